@@ -1,0 +1,24 @@
+/** Three projects: pure code and server in Node, components in a DOM, the product in a real browser. */
+const alias = { '^@/(.*)$': '<rootDir>/$1' };
+const untransformed = ['/node_modules/(?!(lucia|@lucia-auth|@oslojs|pure-rand|fflate)/)'];
+const node = {
+  testEnvironment: 'node',
+  transform: { '\\.[jt]sx?$': ['babel-jest', { configFile: false, presets: ['@babel/preset-typescript'], plugins: ['@babel/plugin-transform-modules-commonjs'] }] },
+  transformIgnorePatterns: untransformed,
+  moduleNameMapper: alias,
+  modulePathIgnorePatterns: ['<rootDir>/dist', '<rootDir>/.state'],
+};
+
+module.exports = {
+  projects: [
+    { ...node, displayName: 'node', testMatch: ['<rootDir>/tests/**/*.test.ts'], testPathIgnorePatterns: ['<rootDir>/tests/e2e/'] },
+    {
+      displayName: 'web',
+      preset: 'jest-expo/web',
+      testMatch: ['<rootDir>/tests/components/**/*.test.tsx'],
+      moduleNameMapper: { ...alias, '\\.css$': '<rootDir>/tests/support/empty-module.js' },
+      modulePathIgnorePatterns: ['<rootDir>/dist', '<rootDir>/.state'],
+    },
+    { ...node, displayName: 'e2e', testMatch: ['<rootDir>/tests/e2e/**/*.test.ts'] },
+  ],
+};

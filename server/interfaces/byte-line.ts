@@ -1,0 +1,23 @@
+/**
+ * A line of bytes to a controller: a serial port, a pseudo-terminal or the simulated controller. The link driver
+ * knows nothing of what is behind it.
+ */
+export interface ByteLine {
+  /** Writes bytes at once; resolves or rejects by its own deadline, never hangs. */
+  write(bytes: string): void;
+  close(): void;
+}
+
+export interface ByteLineHandlers {
+  /** One received line without its line end, exactly as it came (also garbage). */
+  onLine(line: string): void;
+  /** The line is gone and will not come back by itself; called at most once. */
+  onClosed(why: string): void;
+}
+
+export interface ByteLineFactory {
+  /** Where the line goes, in words for people. */
+  readonly description: string;
+  /** Opens a fresh line. Rejects with an Error whose message says what was tried and what is wrong. */
+  open(handlers: ByteLineHandlers): Promise<ByteLine>;
+}

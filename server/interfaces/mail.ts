@@ -1,0 +1,9 @@
+export interface Mail {
+  to: string;
+  subject: string;
+  text: string;
+}
+
+export interface MailPort {
+  send(mail: Mail): Promise<void>;
+}

@@ -1,0 +1,11 @@
+/** Where samples go and come from. Batches are idempotent: a sample of the same channel and instant is stored once. */
+export interface SampleStore {
+  append(labId: string, channelId: string, batch: SampleBatch): Promise<{ stored: number; known: number }>;
+  read(labId: string, channelId: string, window: { fromUtcMs: number; toUtcMs: number }): Promise<SampleBatch>;
+}
+
+/** Mid-exposure instants (UTC ms, microsecond resolution) and values in the channel's unit; equal lengths. */
+export interface SampleBatch {
+  utcMs: Float64Array;
+  value: Float64Array;
+}

@@ -1,0 +1,17 @@
+/** Sessions behind a small port: the database holds only the SHA-256 of a token, the cookie holds the token. */
+export interface SessionPort {
+  create(userId: string, device: { userAgent: string; ip: string }): Promise<{ token: string; expiresAt: Date }>;
+  /** Null when unknown, expired or ended. Renews a session that is past half its idle life. */
+  validate(token: string): Promise<Session | null>;
+  end(token: string): Promise<void>;
+  endAllOf(userId: string): Promise<void>;
+}
+
+export interface Session {
+  id: string;
+  userId: string;
+  createdAt: Date;
+  /** When the password was last given. */
+  authAt: Date;
+  expiresAt: Date;
+}

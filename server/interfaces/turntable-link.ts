@@ -1,0 +1,94 @@
+import type { Instant } from './clock';
+
+/** What the run engine may ask of the turntable and what it is told: the whole vocabulary between engine and link. */
+
+export type LinkCondition =
+  /** not opened, or closed on purpose */
+  | 'closed'
+  /** opening the port or waiting for the reply to hello */
+  | 'opening'
+  /** hello answered; a valid reply within the last 5 s */
+  | 'ready'
+  /** no valid reply for 5 s, or the port is gone; reconnecting by itself */
+  | 'lost'
+  /** the other end is not a controller this version can drive (other major version, another device) */
+  | 'refused';
+
+export interface ControllerState {
+  bootId: string;
+  firmware: string;
+  positionKnown: boolean;
+  /** Counted angle, deg; null while the position is unknown. */
+  angleDeg: number | null;
+  moving: boolean;
+  interlockClosed: boolean;
+  supplyPresent: boolean;
+  armKey: boolean;
+  driversOn: boolean;
+}
+
+export type LinkCommand =
+  | { kind: 'home'; id: string }
+  | {
+      kind: 'move';
+      id: string;
+      /** Absolute turntable angle, deg. */
+      targetDeg: number;
+      speedDegS: number;
+      accelerationDegS2: number;
+      /** When the motion is to begin; null: at once. */
+      startUtcMs: number | null;
+    }
+  /** Decelerate, keep torque, cancel a waiting move. */
+  | { kind: 'hold'; id: string }
+  /** Decelerate and end the session's motion; drivers released only where the rig is marked safe when free. */
+  | { kind: 'stop'; id: string; releaseDrivers: boolean };
+
+export type MotionEndCause = 'done' | 'hold' | 'stop' | 'interlock' | 'supply' | 'lease' | 'limit' | 'reset';
+
+export type LinkEvent =
+  | { kind: 'ready'; at: Instant; controller: ControllerState; /** same boot id as before the line was lost */ sameBoot: boolean }
+  | { kind: 'lost'; at: Instant; why: string }
+  | { kind: 'refused-controller'; at: Instant; why: string }
+  | { kind: 'accepted'; at: Instant; commandId: string }
+  | { kind: 'refused'; at: Instant; commandId: string; code: string; message: string }
+  /** Motion of `commandId` began at the controller's own stamp. */
+  | { kind: 'motion-began'; at: Instant; commandId: string; angleDeg: number | null }
+  /** Motion ended; `angleDeg` is the achieved angle (null: position lost). A cancelled waiting move ends without having begun. */
+  | { kind: 'motion-ended'; at: Instant; commandId: string; angleDeg: number | null; cause: MotionEndCause }
+  | { kind: 'homed'; at: Instant; commandId: string; angleDeg: number }
+  | { kind: 'home-failed'; at: Instant; commandId: string; message: string }
+  /** The controller itself says that the turntable stands still after hold or stop `commandId`. */
+  | { kind: 'standstill'; at: Instant; commandId: string; angleDeg: number | null }
+  | { kind: 'edge'; at: Instant; angleDeg: number; direction: 'ccw' | 'cw' }
+  | { kind: 'interlock'; at: Instant; closed: boolean }
+  | { kind: 'supply'; at: Instant; present: boolean }
+  | { kind: 'arm-key'; at: Instant; on: boolean }
+  /** The controller restarted: position is lost, whatever was running is over. */
+  | { kind: 'reset'; at: Instant; bootId: string }
+  /** The motion lease lapsed in the controller. */
+  | { kind: 'lease-lapsed'; at: Instant };
+
+export interface LinkHealth {
+  condition: LinkCondition;
+  /** Words for people: what is awaited, or why it is refused. */
+  detail: string;
+  lastReplyUtcMs: number | null;
+  roundTripMs: number | null;
+  discardedLines: number;
+  reconnects: number;
+  clockOffsetMs: number | null;
+  clockUS: number | null;
+}
+
+export interface TurntableLink {
+  open(): void;
+  close(): Promise<void>;
+  health(): LinkHealth;
+  controller(): ControllerState | null;
+  /** Sends a command at most once; the outcome comes as events. Hold and stop are repeated until confirmed. */
+  send(command: LinkCommand): void;
+  /** Asked before each heartbeat: may the motion lease be renewed? Answered by the run loop itself. */
+  setLeaseRule(mayRenew: () => boolean): void;
+  subscribe(listener: (event: LinkEvent) => void): () => void;
+}

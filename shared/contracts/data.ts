@@ -1,0 +1,72 @@
+import * as z from 'zod';
+import { idSchema, instantSchema } from './common';
+import { defineRoute } from './route';
+
+export const channelViewSchema = z.strictObject({
+  id: idSchema, rigId: idSchema, name: z.string(), quantity: z.string(), unit: z.string(), role: z.enum(['deflection', 'environment', 'turntable']), source: z.enum(['simulated', 'import', 'stream']),
+});
+export type ChannelView = z.infer<typeof channelViewSchema>;
+
+/** How a CSV is to be read. Columns are counted from 0. */
+export const importMappingSchema = z.strictObject({
+  delimiter: z.enum([',', ';', '\t', '|', ' ']),
+  decimal: z.enum(['.', ',']),
+  headerRow: z.boolean(),
+  timeColumn: z.number().int().nonnegative(),
+  timeFormat: z.enum(['iso', 'epoch-s', 'epoch-ms', 'elapsed-s']),
+  /** The instant of elapsed time 0; needed for `elapsed-s` only. */
+  elapsedFrom: instantSchema.optional(),
+  valueColumn: z.number().int().nonnegative(),
+  unit: z.enum(['rad', 'mrad', 'urad', 'm', 'mm']),
+});
+export type ImportMapping = z.infer<typeof importMappingSchema>;
+
+/** Row numbers count lines of the file from 1, as an editor shows them. */
+export const importProblemSchema = z.strictObject({ row: z.number().int().nullable(), column: z.string().nullable(), message: z.string() });
+
+export const importPreviewSchema = z.strictObject({
+  columns: z.array(z.strictObject({ index: z.number().int(), name: z.string(), sample: z.string() })),
+  /** The first rows as read with the mapping's delimiter. */
+  rows: z.array(z.array(z.string())),
+  mapping: importMappingSchema,
+  /** What could not be guessed and must be stated. */
+  ambiguous: z.array(z.string()),
+});
+export const importViewSchema = z.strictObject({
+  id: idSchema, runId: idSchema, fileName: z.string(), state: z.enum(['waiting', 'received', 'stored', 'refused']), bytes: z.number().int(), sha256: z.string().nullable(), preview: importPreviewSchema.nullable(),
+});
+export type ImportView = z.infer<typeof importViewSchema>;
+export const importCheckSchema = z.strictObject({
+  ok: z.boolean(), rows: z.number().int(), firstAt: instantSchema.nullable(), lastAt: instantSchema.nullable(), medianIntervalS: z.number().nullable(),
+  /** The first 100 problems, and how many there are in all. */
+  problems: z.array(importProblemSchema), problemCount: z.number().int(),
+  /** In words: how the data lie against the run, for example `covers 100 % of the run`. */
+  overlap: z.string(),
+});
+export type ImportCheck = z.infer<typeof importCheckSchema>;
+
+const importPath = '/labs/:labId/imports/:importId';
+
+export const listChannels = defineRoute({ name: 'listChannels', summary: 'Channels of a rig', method: 'GET', path: '/labs/:labId/rigs/:rigId/channels', access: 'read', status: 200, response: z.strictObject({ items: z.array(channelViewSchema) }), problems: ['not-found'] });
+export const beginImport = defineRoute({
+  name: 'beginImport', summary: 'Begin the import of a deflection file for a run', method: 'POST', path: '/labs/:labId/runs/:runId/imports', access: 'data.import', status: 201, idempotent: true,
+  body: z.strictObject({ fileName: z.string().min(1).max(255) }), response: importViewSchema, problems: ['invalid-input', 'not-found'],
+});
+export const putImportContent = defineRoute({
+  name: 'putImportContent', summary: 'Send the file; the answer shows its first rows and a guessed mapping', method: 'PUT', path: `${importPath}/content`, access: 'data.import', status: 200, consumes: 'text/csv',
+  response: importViewSchema, problems: ['not-found', 'too-large', 'wrong-content-type', 'unreadable-data', 'not-possible-now'],
+});
+export const checkImport = defineRoute({
+  name: 'checkImport', summary: 'Read the whole file with a mapping and list every problem by row; stores nothing', method: 'POST', path: `${importPath}/check`, access: 'data.import', status: 200,
+  body: z.strictObject({ mapping: importMappingSchema }), response: importCheckSchema, problems: ['invalid-input', 'not-found', 'not-possible-now'],
+});
+export const commitImport = defineRoute({
+  name: 'commitImport', summary: 'Store the samples, all or none', method: 'POST', path: `${importPath}/commit`, access: 'data.import', status: 200, idempotent: true,
+  body: z.strictObject({ mapping: importMappingSchema, channelName: z.string().min(1).max(80) }),
+  response: z.strictObject({ channel: channelViewSchema, stored: z.number().int(), known: z.number().int() }), problems: ['invalid-input', 'not-found', 'unreadable-data', 'not-possible-now', 'already-exists'],
+});
+export const readSamples = defineRoute({
+  name: 'readSamples', summary: 'Samples of a channel within a run for a plot: least and greatest in each of `points` / 2 intervals', method: 'GET', path: '/labs/:labId/runs/:runId/samples', access: 'read', status: 200,
+  query: z.strictObject({ channelId: idSchema.optional(), fromUtcMs: z.coerce.number().optional(), toUtcMs: z.coerce.number().optional(), points: z.coerce.number().int().min(10).max(4000).default(2000) }),
+  response: z.strictObject({ channel: channelViewSchema.nullable(), channels: z.array(channelViewSchema), utcMs: z.array(z.number()), value: z.array(z.number()), total: z.number().int() }), problems: ['invalid-input', 'not-found'],
+});

@@ -1,0 +1,20 @@
+const token = (name) => `rgb(var(--${name}) / <alpha-value>)`;
+const colors = Object.fromEntries(
+  ['ink', 'panel', 'panel2', 'line', 'text', 'dim', 'faint', 'lamp', 'on-lamp', 'near', 'far', 'danger', 'good'].map((name) => [name, token(name)]),
+);
+
+/** @type {import('tailwindcss').Config} */
+module.exports = {
+  content: ['./app/**/*.{ts,tsx}', './components/**/*.{ts,tsx}'],
+  presets: [require('nativewind/preset')],
+  darkMode: 'class',
+  theme: {
+    extend: {
+      colors,
+      fontFamily: { sans: ['Atkinson Hyperlegible Next'], mono: ['Atkinson Hyperlegible Mono'] },
+      borderRadius: { panel: '14px', action: '16px' },
+      screens: { wide: '1024px' },
+    },
+    fontSize: { 13: ['13px', '18px'], 15: ['15px', '21px'], 17: ['17px', '24px'], 20: ['20px', '26px'], 24: ['24px', '30px'], 30: ['30px', '36px'], 44: ['44px', '50px'], 60: ['60px', '64px'] },
+  },
+};
