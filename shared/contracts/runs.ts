@@ -85,12 +85,12 @@ export const rehearse = defineRoute({
   response: runSummarySchema, problems: ['invalid-input', 'not-found', 'protocol-refused', 'not-yet'],
 });
 export const getRun = defineRoute({ name: 'getRun', summary: 'One run', method: 'GET', path, access: 'read', status: 200, response: runViewSchema, problems: ['not-found'] });
-const intervention = <L extends string>(name: string, summary: string, leaf: L, access: 'run.hold' | 'run.stop' | 'run.resume') =>
-  defineRoute({ name, summary, method: 'POST', path: `${path}/${leaf}` as const, access, status: 202, idempotent: true, body: command, response: accepted, problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'key-reused', 'still-running'] });
-export const holdRun = intervention('holdRun', 'Hold: decelerate, keep torque; the run can be resumed', 'hold', 'run.hold');
-export const holdAfterDwell = intervention('holdAfterDwell', 'Hold when the present dwell has ended', 'hold-after-dwell', 'run.hold');
-export const resumeRun = intervention('resumeRun', 'Resume a held run', 'resume', 'run.resume');
-export const stopRun = intervention('stopRun', 'Stop: decelerate and end the run', 'stop', 'run.stop');
+const intervention = <L extends string>(leaf: L, route: { name: string; summary: string; access: 'run.hold' | 'run.stop' | 'run.resume' }) =>
+  defineRoute({ ...route, method: 'POST', path: `${path}/${leaf}` as const, status: 202, idempotent: true, body: command, response: accepted, problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'key-reused', 'still-running'] });
+export const holdRun = intervention('hold', { name: 'holdRun', summary: 'Hold: decelerate, keep torque; the run can be resumed', access: 'run.hold' });
+export const holdAfterDwell = intervention('hold-after-dwell', { name: 'holdAfterDwell', summary: 'Hold when the present dwell has ended', access: 'run.hold' });
+export const resumeRun = intervention('resume', { name: 'resumeRun', summary: 'Resume a held run', access: 'run.resume' });
+export const stopRun = intervention('stop', { name: 'stopRun', summary: 'Stop: decelerate and end the run', access: 'run.stop' });
 export const liveRun = defineRoute({ name: 'liveRun', summary: 'Live stream of a run; continues after Last-Event-ID', method: 'GET', path: `${path}/live`, access: 'read', status: 200, produces: 'text/event-stream', problems: ['not-found'] });
 export const listSteps = defineRoute({ name: 'listSteps', summary: 'The step log', method: 'GET', path: `${path}/steps`, access: 'read', status: 200, response: z.strictObject({ items: z.array(stepRowViewSchema) }), problems: ['not-found'] });
 export const stepsCsv = defineRoute({ name: 'stepsCsv', summary: 'The step log as CSV', method: 'GET', path: `${path}/steps.csv`, access: 'read', status: 200, produces: 'text/csv', problems: ['not-found'] });

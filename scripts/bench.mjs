@@ -1,0 +1,30 @@
+#!/usr/bin/env node
+/** `npm run bench [-- NAME …]`: one JSON line for each measurement; nothing here is a test. */
+import { readdirSync } from 'node:fs';
+import { join } from 'node:path';
+import { startCluster } from './lib/cluster.mjs';
+import { ensureDebianPackages } from './lib/debian.mjs';
+import { ensureNodeModules } from './lib/node-modules.mjs';
+import { root } from './lib/paths.mjs';
+import { pass } from './lib/run.mjs';
+import { giveUp } from './lib/say.mjs';
+import { ensureWebBuild } from './lib/web-build.mjs';
+
+const folder = join(root, 'server', 'boot', 'bench');
+const known = readdirSync(folder).filter((name) => name.endsWith('.ts')).map((name) => name.slice(0, -3)).sort();
+const wanted = process.argv.slice(2);
+const strange = wanted.filter((name) => !known.includes(name));
+if (strange.length > 0) giveUp(`no benchmark called ${strange.join(', ')}; there are: ${known.join(', ')}`);
+
+await ensureNodeModules();
+await ensureDebianPackages(['postgresql', 'chromium']);
+await ensureWebBuild();
+const cluster = await startCluster('lab');
+let code = 0;
+for (const name of wanted.length > 0 ? wanted : known) {
+  const database = await cluster.ensureDatabase('evenfall_bench');
+  const env = { ...process.env, EVENFALL_BENCH_DATABASE_URL: database, EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres') };
+  code ||= await pass(process.execPath, ['--expose-gc', '--import', 'tsx', join(folder, `${name}.ts`)], { cwd: root, env });
+}
+if (!cluster.wasRunning) await cluster.stop();
+process.exit(code);

@@ -1,0 +1,29 @@
+#!/usr/bin/env node
+/** `npm run check`: format, lint, types, house rules, dead code. `--fix` repairs what can be repaired. */
+import { join } from 'node:path';
+import { ensureNodeModules } from './lib/node-modules.mjs';
+import { root } from './lib/paths.mjs';
+import { pass } from './lib/run.mjs';
+import { say } from './lib/say.mjs';
+import { ensureTypeFiles } from './lib/type-files.mjs';
+
+await ensureNodeModules();
+await ensureTypeFiles();
+const fix = process.argv.includes('--fix');
+const bin = (name) => join(root, 'node_modules', '.bin', name);
+const steps = [
+  ['format', bin('prettier'), fix ? ['--log-level', 'warn', '--write', '.'] : ['--log-level', 'warn', '--check', '.']],
+  ['lint', bin('eslint'), ['--max-warnings', '0', ...(fix ? ['--fix'] : []), '.']],
+  ['types', bin('tsc'), ['--noEmit', '-p', '.']],
+  ['house rules', bin('jest'), ['tests/house', '--silent', '--selectProjects', 'node']],
+  ['dead code', bin('knip'), ['--no-progress']],
+];
+const failed = [];
+for (const [name, command, args] of steps) {
+  const start = Date.now();
+  const code = await pass(command, args, { cwd: root, env: { ...process.env, TIMING: '' } });
+  say(`${code === 0 ? 'ok  ' : 'FAIL'} ${name} (${((Date.now() - start) / 1000).toFixed(1)} s)`);
+  if (code !== 0) failed.push(name);
+}
+if (failed.length > 0) say(`Failed: ${failed.join(', ')}.`);
+process.exit(failed.length === 0 ? 0 : 1);
