@@ -1,0 +1,86 @@
+import type { Clock } from '../interfaces/clock';
+import type { Session, SessionPort } from '../interfaces/sessions';
+import type { Membership, SignedIn } from './route-context';
+
+/** Where accounts and memberships are looked up: the database, through `server/store`. */
+export interface AccessSource {
+  user(userId: string): Promise<{ id: string; name: string; email: string } | null>;
+  membership(userId: string, labId: string): Promise<Membership | null>;
+  /** Sessions within their absolute life and memberships of everybody in these labs, for the memory copy. */
+  ofLabs(labIds: readonly string[]): Promise<{ sessions: Session[]; users: { id: string; name: string; email: string }[]; memberships: (Membership & { userId: string })[] }>;
+}
+
+interface Copy {
+  sessions: Map<string, Session>;
+  users: Map<string, { id: string; name: string; email: string }>;
+  memberships: Map<string, Membership>;
+}
+
+/** A session that idled out may still hold and stop during a run of its lab, but none lives longer than this. */
+const absoluteLifeMs = 7 * 24 * 3_600_000;
+
+const membershipKey = (userId: string, labId: string) => `${userId} ${labId}`;
+const emptyCopy = (): Copy => ({ sessions: new Map(), users: new Map(), memberships: new Map() });
+
+/**
+ * Who is signed in and what they are in a lab. Ordinary routes ask the database each time, so that a changed role
+ * holds at once. For hold and stop a copy of everybody in the labs with an active run is kept in memory: these two
+ * must work when the database does not.
+ */
+export class AccessDirectory {
+  private copy = emptyCopy();
+
+  constructor(
+    private readonly parts: { source: AccessSource; sessions: SessionPort; clock: Clock; sha256: (text: string) => string },
+  ) {}
+
+  /** The signed-in account of a cookie token, or null. */
+  async signedIn(token: string): Promise<SignedIn | null> {
+    const session = await this.parts.sessions.validate(token);
+    if (session === null) return null;
+    const user = await this.parts.source.user(session.userId);
+    return user === null ? null : { userId: user.id, name: user.name, email: user.email, session, token };
+  }
+
+  /** Role of an account in a lab, or null for a stranger. */
+  membership(userId: string, labId: string): Promise<Membership | null> {
+    return this.parts.source.membership(userId, labId);
+  }
+
+  /** Caller and role out of memory alone; null when the copy does not hold them. */
+  remembered(token: string, labId: string): { me: SignedIn; membership: Membership } | null {
+    const session = this.copy.sessions.get(this.parts.sha256(token));
+    if (session === undefined || this.parts.clock.utcMs() - session.createdAt.getTime() > absoluteLifeMs) return null;
+    const user = this.copy.users.get(session.userId);
+    const membership = this.copy.memberships.get(membershipKey(session.userId, labId));
+    if (user === undefined || membership === undefined) return null;
+    return { me: { userId: user.id, name: user.name, email: user.email, session, token }, membership };
+  }
+
+  /** Takes a fresh copy for the labs with an active run; keeps the old one when the database does not answer. */
+  async refresh(labIds: readonly string[]): Promise<void> {
+    if (labIds.length === 0) {
+      this.copy = emptyCopy();
+      return;
+    }
+    const found = await this.parts.source.ofLabs(labIds);
+    const nowMs = this.parts.clock.utcMs();
+    const idledOut = [...this.copy.sessions.values()].filter((session) => session.expiresAt.getTime() <= nowMs && nowMs - session.createdAt.getTime() <= absoluteLifeMs);
+    this.copy = {
+      sessions: new Map([...idledOut, ...found.sessions].map((session) => [session.id, session])),
+      users: new Map(found.users.map((user) => [user.id, user])),
+      memberships: new Map(found.memberships.map(({ userId, ...membership }) => [membershipKey(userId, membership.labId), membership])),
+    };
+  }
+
+  /** Forgets an ended session at once. */
+  forgetSession(token: string): void {
+    this.copy.sessions.delete(this.parts.sha256(token));
+  }
+
+  /** Forgets all that is remembered of an account, after its role, membership or password changed. */
+  forgetUser(userId: string): void {
+    for (const [id, session] of this.copy.sessions) if (session.userId === userId) this.copy.sessions.delete(id);
+    for (const key of this.copy.memberships.keys()) if (key.startsWith(`${userId} `)) this.copy.memberships.delete(key);
+  }
+}

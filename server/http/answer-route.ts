@@ -1,0 +1,133 @@
+import express, { type Request, type RequestHandler, type Response } from 'express';
+import type { RouteContract } from '@/shared/contracts/route';
+import { may, roles, type Act } from '@/shared/contracts/roles';
+import type { IdempotencyAnswer, IdempotencyPort } from '../interfaces/idempotency';
+import { checkedResponse } from './check-response';
+import { invalidInput } from './errors';
+import { actOnce, fingerprintOf, idempotencyKeyOf, rethrowKeptProblem } from './idempotent';
+import { linkToNext } from './paging';
+import { notFound, ProblemError } from './problem-error';
+import type { Membership, MountedRoute, RouteContext, SignedIn } from './route-context';
+import type { Services } from './services';
+import { clearSessionCookie, readSessionToken, setSessionCookie } from './session-cookie';
+
+/** Hold and stop: no database may stand between a member and these. */
+export const isIntervention = (contract: RouteContract) => contract.access === 'run.hold' || contract.access === 'run.stop';
+
+export interface RouteParts {
+  services: Services;
+  readJson: RequestHandler;
+  /** Keys of hold and stop. */
+  interventionKeys: IdempotencyPort;
+}
+
+/** The life of a request after the edge: who, what, once, answer. */
+export function answerRoute(route: MountedRoute, parts: RouteParts): RequestHandler {
+  const { contract } = route;
+  return async (req, res) => {
+    const caller = await identify(contract, req, parts.services);
+    const query = parsed('query', contract, req.query);
+    const body = await readBody(contract, { req, res, readJson: parts.readJson });
+    const ifMatch = readIfMatch(contract, req);
+    const reply: { etag: string | null } = { etag: null };
+    const context = {
+      ...caller, ...sessionCookies(res, parts.services), params: req.params, query, body, ifMatch, services: parts.services, req, res,
+      setEtag: (version: string) => {
+        reply.etag = version;
+      },
+    } as unknown as RouteContext;
+    const act = async (): Promise<IdempotencyAnswer> => {
+      const value = await route.handle(context);
+      return { status: contract.status, body: contract.response === undefined ? null : checkedResponse(contract.response, value, parts.services), etag: reply.etag };
+    };
+    if (contract.produces !== undefined) {
+      await route.handle(context);
+      return;
+    }
+    const answer = contract.idempotent === true ? await once(contract, { context, req, parts }, act) : await act();
+    rethrowKeptProblem(answer);
+    send(res, req, answer);
+  };
+}
+
+function once(contract: RouteContract, from: { context: RouteContext; req: Request; parts: RouteParts }, act: () => Promise<IdempotencyAnswer>): Promise<IdempotencyAnswer> {
+  const { context, req, parts } = from;
+  const key = idempotencyKeyOf(req.get('idempotency-key'));
+  const fingerprint = fingerprintOf({ method: req.method, path: req.path, ifMatch: context.ifMatch, body: context.body }, parts.services.sha256);
+  const port = isIntervention(contract) ? parts.interventionKeys : parts.services.idempotency;
+  const me = context.me as SignedIn | null;
+  return actOnce(port, { userId: me?.userId ?? '', key, fingerprint }, act);
+}
+
+function send(res: Response, req: Request, answer: IdempotencyAnswer): void {
+  if (answer.etag !== null) res.set('ETag', `"${answer.etag}"`);
+  const link = linkToNext(req, answer.body);
+  if (link !== null) res.set('Link', link);
+  if (answer.body === null) res.status(answer.status).end();
+  else res.status(answer.status).json(answer.body);
+}
+
+async function identify(contract: RouteContract, req: Request, services: Services): Promise<{ me: SignedIn | null; membership: Membership | null }> {
+  const token = readSessionToken(req, services.config);
+  if (contract.access === 'public') return { me: null, membership: null };
+  if (token === null) throw new ProblemError('not-signed-in', 'Sign in first; the request carries no session.');
+  const labId = typeof req.params.labId === 'string' ? req.params.labId : '';
+  const remembered = isIntervention(contract) ? services.access.remembered(token, labId) : null;
+  const me = remembered?.me ?? (await services.access.signedIn(token));
+  if (me === null) throw new ProblemError('session-expired', 'The session has ended. Sign in again; what you typed is still on the screen.');
+  if (contract.access === 'signed-in') return { me, membership: null };
+  const membership = remembered?.membership ?? (await services.access.membership(me.userId, labId));
+  if (membership === null) throw notFound('lab');
+  assertMay(membership, contract.access, services);
+  return { me, membership };
+}
+
+function assertMay(membership: Membership, act: Act, services: Services): void {
+  if (may(membership.role, act)) return;
+  services.log.warn({ labId: membership.labId, role: membership.role, act }, 'refused by role');
+  const who = roles.filter((role) => may(role, act));
+  throw new ProblemError('not-allowed', `Your role in ${membership.labName} is ${membership.role}; this needs ${who.join(' or ')}.`);
+}
+
+function parsed(where: 'query' | 'body', contract: RouteContract, value: unknown): unknown {
+  const schema = contract[where];
+  if (schema === undefined) return undefined;
+  const result = schema.safeParse(value);
+  if (!result.success) throw invalidInput(where, result.error);
+  return result.data;
+}
+
+const hasBody = (req: Request) => req.headers['transfer-encoding'] !== undefined || Number(req.headers['content-length'] ?? 0) > 0;
+
+async function readBody(contract: RouteContract, { req, res, readJson }: { req: Request; res: Response; readJson: RequestHandler }): Promise<unknown> {
+  if (contract.consumes !== undefined) {
+    if (req.is(contract.consumes) === false) throw new ProblemError('wrong-content-type', `This route takes ${contract.consumes}; the request said ${req.get('content-type') ?? 'nothing'}.`);
+    return undefined;
+  }
+  if (contract.body === undefined) return undefined;
+  if (!hasBody(req)) return parsed('body', contract, {});
+  if (req.is('application/json') === false) throw new ProblemError('wrong-content-type', `This route takes application/json; the request said ${req.get('content-type') ?? 'nothing'}.`);
+  await new Promise<void>((resolve, reject) => {
+    void readJson(req, res, (error?: unknown) => {
+      if (error === undefined) resolve();
+      else reject(error as Error);
+    });
+  });
+  return parsed('body', contract, req.body ?? {});
+}
+
+function readIfMatch(contract: RouteContract, req: Request): string | null {
+  const version = req.get('if-match')?.replace(/^(?:W\/)?"(.*)"$/, '$1') ?? null;
+  if (contract.etag === 'required' && (version === null || version === '')) throw new ProblemError('precondition-required', 'Name the version you edited: send its ETag in the header If-Match.');
+  return version;
+}
+
+function sessionCookies(res: Response, services: Services) {
+  return {
+    setSession: (token: string, expiresAt: Date) => setSessionCookie(res, services.config, { token, expiresAt }),
+    clearSession: () => clearSessionCookie(res, services.config),
+  };
+}
+
+/** Reader of JSON bodies up to `limitBytes`; scalars are JSON too and get the schema's own refusal. */
+export const jsonReader = (limitBytes: number): RequestHandler => express.json({ limit: limitBytes, strict: false, type: 'application/json' });

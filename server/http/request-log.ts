@@ -1,0 +1,22 @@
+import type { RequestHandler, Response } from 'express';
+import type { Services } from './services';
+
+/** Number of the request in the log; the `instance` of its problem. */
+export const requestIdOf = (res: Response): string => String(res.locals.requestId ?? '');
+
+/**
+ * One line for each request of the API: method, the route's pattern (its address may hold a token), status and time.
+ * No headers, no bodies.
+ */
+export function logRequests(services: Pick<Services, 'log' | 'clock' | 'newId'>): RequestHandler {
+  return (req, res, next) => {
+    const startMs = services.clock.monotonicMs();
+    res.locals.requestId = services.newId();
+    res.once('finish', () => {
+      if (!req.originalUrl.startsWith('/api/')) return;
+      const route: unknown = (req as { route?: { path?: unknown } }).route?.path;
+      services.log.info({ requestId: requestIdOf(res), method: req.method, route: typeof route === 'string' ? route : null, status: res.statusCode, ms: Math.round(services.clock.monotonicMs() - startMs) }, 'answered');
+    });
+    next();
+  };
+}

@@ -1,0 +1,26 @@
+import type { Logger } from 'pino';
+import type { Clock } from '../interfaces/clock';
+import type { IdempotencyPort } from '../interfaces/idempotency';
+import type { MailPort } from '../interfaces/mail';
+import type { ServerConfig } from '../interfaces/server-config';
+import type { SessionPort } from '../interfaces/sessions';
+import type { Database } from '../store/database';
+import type { AccessDirectory } from './access-directory';
+
+/** Everything a route may use; built once by `server/boot/build-server.ts`. */
+export interface Services {
+  config: ServerConfig;
+  clock: Clock;
+  log: Logger;
+  /** A fresh random id (UUID). */
+  newId(): string;
+  /** A fresh secret of 256 bits for links in mails, base64url. */
+  newToken(): string;
+  /** SHA-256 of UTF-8 text, hex. */
+  sha256(text: string): string;
+  database: Database;
+  sessions: SessionPort;
+  access: AccessDirectory;
+  idempotency: IdempotencyPort;
+  mail: MailPort;
+}

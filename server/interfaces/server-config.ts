@@ -1,0 +1,31 @@
+/** Everything the environment decides, read once by `server/boot/config.ts`. */
+export interface ServerConfig {
+  /** `production` strips what a contract does not name from an answer; elsewhere such an answer is an error. */
+  mode: 'production' | 'development' | 'test';
+  databaseUrl: string;
+  host: string;
+  /** 0: any free port. */
+  port: number;
+  /** Address under which people reach the server, without a slash at its end; decides links in mails, cookies and the same-origin check. Null: the request's own host. */
+  publicUrl: string | null;
+  /** Number of reverse proxies in front whose forwarded addresses are believed. */
+  trustedProxies: number;
+  /** Demo lab and demo accounts exist, mails are written as files. */
+  demo: boolean;
+  /** Folder for what is not in the database: mails of the demo, journals. */
+  stateDir: string;
+  /** Folder of the built web application; null: none is served. */
+  webDir: string | null;
+  smtpUrl: string | null;
+  mailFrom: string;
+  logLevel: 'silent' | 'fatal' | 'error' | 'warn' | 'info' | 'debug';
+  limits: {
+    /** Requests a minute and address, without hold and stop. */
+    requestsPerMinute: number;
+    /** Holds and stops a minute and address: a bucket of their own, so that nothing else can use it up. */
+    interventionsPerMinute: number;
+    jsonBytes: number;
+    importBytes: number;
+    streamsPerUser: number;
+  };
+}
