@@ -1,0 +1,2 @@
+export { ThemeProvider, useTheme } from './theme-provider';
+export { themeNames, themes, type ThemeColors, type ThemeName } from './tokens';

@@ -1,0 +1,13 @@
+export { Button, IconButton, type ButtonKind, type ButtonProps } from './button';
+export { Chip } from './chip';
+export { Field, FieldFrame, Select, type FieldProps } from './field';
+export { Icon, type IconName } from './icon';
+export { Panel, Row, Section } from './panel';
+export { Screen } from './screen';
+export { Sheet } from './sheet';
+export { Empty, Loading, Offline, ProblemNotice } from './states';
+export { Check, Switch } from './switch';
+export { Tabs } from './tabs';
+export { Body, Heading, Label, Num, type Tone } from './text';
+export { ToastProvider, useToast } from './toast';
+export { useWide } from './use-wide';

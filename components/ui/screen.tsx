@@ -1,0 +1,68 @@
+import type { ReactNode } from 'react';
+import { Link, type Href } from 'expo-router';
+import { ScrollView, View } from 'react-native';
+import { Icon } from './icon';
+import { Heading } from './text';
+import { useWide } from './use-wide';
+
+interface ScreenProps {
+  title: string;
+  /** Where the arrow before the title leads, and its name. */
+  back?: { href: Href; label: string };
+  /** At the right of the title: a chip, an icon button. */
+  trailing?: ReactNode;
+  children?: ReactNode;
+  /** Stays at the bottom within the thumb's reach: the acts of the screen. */
+  footer?: ReactNode;
+  /** The right pane from 1024 px; below that it follows the content, unless `asideOnlyWide`. */
+  aside?: ReactNode;
+  asideOnlyWide?: boolean;
+  testID?: string;
+}
+
+const gutter = 'mx-auto w-full max-w-[920px] px-4 wide:px-7';
+
+/** The frame of every screen: one heading of level 1, scrolled content, acts at the bottom, a right pane when wide. */
+export function Screen({ title, back, trailing, children, footer, aside, asideOnlyWide = false, testID }: ScreenProps) {
+  const wide = useWide();
+  const beside = wide && aside !== undefined;
+  return (
+    <View className="min-h-0 flex-1 flex-row" testID={testID}>
+      <View role="main" className="min-w-0 flex-1">
+        <ScrollView className="flex-1" contentContainerClassName="pb-8" keyboardShouldPersistTaps="handled">
+          <View className={`${gutter} gap-4 pt-2 wide:pt-4`}>
+            <TitleBar title={title} back={back} trailing={trailing} />
+            {children}
+            {beside || asideOnlyWide ? null : aside}
+          </View>
+        </ScrollView>
+        {footer === undefined ? null : (
+          <View className="border-t border-line bg-ink">
+            <View className={`${gutter} py-3`}>{footer}</View>
+          </View>
+        )}
+      </View>
+      {beside ? (
+        <ScrollView role="complementary" aria-label="Details" className="w-[400px] flex-none border-l border-line" contentContainerClassName="gap-4 p-5 pb-8">
+          {aside}
+        </ScrollView>
+      ) : null}
+    </View>
+  );
+}
+
+function TitleBar({ title, back, trailing }: Pick<ScreenProps, 'title' | 'back' | 'trailing'>) {
+  return (
+    <View className="min-h-target flex-row items-center gap-1">
+      {back === undefined ? null : (
+        <Link href={back.href} aria-label={`Back to ${back.label}`} className="-ml-3 h-12 w-12 items-center justify-center rounded-action hover:bg-panel2" style={{ display: 'flex' }}>
+          <Icon name="back" />
+        </Link>
+      )}
+      <Heading level={1} className="min-w-0 shrink grow py-1 wide:text-24" numberOfLines={2}>
+        {title}
+      </Heading>
+      {trailing === undefined ? null : <View className="flex-none flex-row items-center gap-1">{trailing}</View>}
+    </View>
+  );
+}

@@ -1,0 +1,31 @@
+const http = require('node:http');
+const { getDefaultConfig } = require('expo/metro-config');
+const { withNativeWind } = require('nativewind/metro');
+
+const config = getDefaultConfig(__dirname);
+
+// zod's translations are reached through one index file and would ride along in full; English is imported directly.
+const resolveRequest = config.resolver.resolveRequest;
+config.resolver.resolveRequest = (context, moduleName, platform) => {
+  if (moduleName.endsWith('/locales/index.js') && /[\\/]zod[\\/]v4[\\/]/.test(context.originModulePath)) return { type: 'empty' };
+  return (resolveRequest ?? context.resolveRequest)(context, moduleName, platform);
+};
+
+// In development the page comes from here and the API from the server: one origin, so cookies and live streams work as in production.
+config.server.enhanceMiddleware = (middleware) => (request, response, next) => {
+  const port = process.env.EVENFALL_API_PORT;
+  if (port === undefined || !request.url.startsWith('/api/')) return middleware(request, response, next);
+  const upstream = http.request({ host: '127.0.0.1', port, path: request.url, method: request.method, headers: request.headers }, (reply) => {
+    response.writeHead(reply.statusCode ?? 502, reply.headers);
+    reply.pipe(response);
+  });
+  upstream.on('error', () => {
+    if (!response.headersSent) response.writeHead(502, { 'content-type': 'text/plain' });
+    response.end('The API does not answer.');
+  });
+  response.on('close', () => upstream.destroy());
+  request.pipe(upstream);
+  return undefined;
+};
+
+module.exports = withNativeWind(config, { input: './global.css' });
