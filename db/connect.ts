@@ -1,0 +1,66 @@
+import { drizzle, type NodePgDatabase, type NodePgQueryResultHKT } from 'drizzle-orm/node-postgres';
+import type { PgDatabase } from 'drizzle-orm/pg-core';
+import { Pool, type PoolClient } from 'pg';
+import * as schema from './schema';
+
+export type Schema = typeof schema;
+/** A database or a transaction: what the functions of the store take. */
+export type Handle = PgDatabase<NodePgQueryResultHKT, Schema>;
+
+export interface Connection {
+  db: NodePgDatabase<Schema>;
+  pool: Pool;
+  /**
+   * One transaction for work that needs the bare client (COPY) beside the handle; both speak in it. No statement
+   * timeout holds in it, for bulk work takes its time.
+   */
+  bulk<T>(work: (client: PoolClient, handle: Handle) => Promise<T>): Promise<T>;
+  close(): Promise<void>;
+}
+
+export interface ConnectOptions {
+  url: string;
+  maxConnections?: number;
+  /** A statement that takes longer is cancelled, so that one bad query cannot hold a connection for ever. */
+  statementTimeoutMs?: number;
+  /** Told when an idle connection breaks (the database went away); the pool makes a new one by itself. */
+  onLost?: (error: Error) => void;
+}
+
+/** Opens a pool of connections. Nothing is sent before the first query. Sessions speak UTC. */
+export function connect({ url, maxConnections = 10, statementTimeoutMs = 10_000, onLost = () => undefined }: ConnectOptions): Connection {
+  const pool = new Pool({
+    connectionString: url,
+    max: maxConnections,
+    application_name: 'evenfall',
+    options: `-c timezone=UTC -c statement_timeout=${statementTimeoutMs}`,
+    connectionTimeoutMillis: 10_000,
+    keepAlive: true,
+  });
+  pool.on('error', onLost);
+  return {
+    db: drizzle(pool, { schema }),
+    pool,
+    bulk: (work) => inBulkTransaction(pool, work),
+    close: () => pool.end(),
+  };
+}
+
+async function inBulkTransaction<T>(pool: Pool, work: (client: PoolClient, handle: Handle) => Promise<T>): Promise<T> {
+  const client = await pool.connect();
+  let broken: Error | undefined;
+  try {
+    await client.query('begin');
+    await client.query('set local statement_timeout = 0');
+    const result = await work(client, drizzle(client, { schema }));
+    await client.query('commit');
+    return result;
+  } catch (error) {
+    await client.query('rollback').catch((failure: Error) => {
+      broken = failure;
+    });
+    throw error;
+  } finally {
+    client.release(broken);
+  }
+}

@@ -1,0 +1,117 @@
+import { sql } from 'drizzle-orm';
+import { bigint, doublePrecision, foreignKey, index, integer, json, pgTable, primaryKey, text, uniqueIndex } from 'drizzle-orm/pg-core';
+import type * as z from 'zod';
+import type { importMappingSchema, importPreviewSchema } from '../../shared/contracts/data';
+import type { EvaluationResult, FitCurve } from '../../shared/evaluation/result';
+import { bytea, instant, key } from './columns';
+import { labs } from './labs';
+import { rigs } from './rigs';
+import { runs } from './runs';
+
+export const channels = pgTable(
+  'channels',
+  {
+    labId: key('lab_id').notNull(),
+    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    rigId: key('rig_id').notNull(),
+    /** Set for a channel of one run alone (a rehearsal's), whose instants may lie over those of other runs. */
+    runId: key('run_id'),
+    name: text('name').notNull(),
+    quantity: text('quantity').notNull(),
+    unit: text('unit').notNull(),
+    role: text('role', { enum: ['deflection', 'environment', 'turntable'] }).notNull(),
+    source: text('source', { enum: ['simulated', 'import', 'stream'] }).notNull(),
+    createdAt: instant('created_at').notNull(),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.id] }),
+    foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
+    foreignKey({ columns: [table.labId, table.runId], foreignColumns: [runs.labId, runs.id] }),
+    uniqueIndex('channels_name_of_rig').on(table.labId, table.rigId, table.name).where(sql`${table.runId} is null`),
+    uniqueIndex('channels_name_of_run').on(table.labId, table.runId, table.name).where(sql`${table.runId} is not null`),
+  ],
+);
+
+/**
+ * Partitioned by month of `at` (hand-written migration). No foreign key to the channel: its check for each row would
+ * cost more than the row, so the sample store checks the channel once for each batch, in the same transaction.
+ */
+export const samples = pgTable(
+  'samples',
+  {
+    labId: key('lab_id').notNull(),
+    channelId: key('channel_id').notNull(),
+    /** Mid-exposure. */
+    at: instant('at').notNull(),
+    /** In the channel's unit. */
+    value: doublePrecision('value').notNull(),
+  },
+  (table) => [primaryKey({ columns: [table.labId, table.channelId, table.at] })],
+);
+
+export const imports = pgTable(
+  'imports',
+  {
+    labId: key('lab_id').notNull(),
+    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    runId: key('run_id').notNull(),
+    fileName: text('file_name').notNull(),
+    state: text('state', { enum: ['waiting', 'received', 'stored', 'refused'] }).notNull(),
+    bytes: bigint('bytes', { mode: 'number' }).notNull().default(0),
+    /** SHA-256 (hex) of the file as sent. */
+    sha256: text('sha256'),
+    preview: json('preview').$type<z.infer<typeof importPreviewSchema>>(),
+    /** How it was read when it was stored. */
+    mapping: json('mapping').$type<z.infer<typeof importMappingSchema>>(),
+    channelId: key('channel_id'),
+    createdAt: instant('created_at').notNull(),
+    createdBy: text('created_by').notNull(),
+    storedAt: instant('stored_at'),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.id] }),
+    foreignKey({ columns: [table.labId, table.runId], foreignColumns: [runs.labId, runs.id] }),
+    foreignKey({ columns: [table.labId, table.channelId], foreignColumns: [channels.labId, channels.id] }),
+    index('imports_run').on(table.labId, table.runId),
+  ],
+);
+
+/**
+ * The file exactly as sent, in pieces of at most 1 MiB numbered from 0: written and read as a stream, so that memory
+ * stays flat, and kept, backed up and rolled back together with the rows made from it.
+ */
+export const importPieces = pgTable(
+  'import_pieces',
+  {
+    labId: key('lab_id').notNull(),
+    importId: key('import_id').notNull(),
+    number: integer('number').notNull(),
+    bytes: bytea('bytes').notNull(),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.importId, table.number] }),
+    foreignKey({ columns: [table.labId, table.importId], foreignColumns: [imports.labId, imports.id] }).onDelete('cascade'),
+  ],
+);
+
+export const evaluations = pgTable(
+  'evaluations',
+  {
+    labId: key('lab_id').notNull().references(() => labs.id),
+    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    runId: key('run_id').notNull(),
+    state: text('state', { enum: ['queued', 'running', 'done', 'failed'] }).notNull(),
+    channel: text('channel'),
+    createdAt: instant('created_at').notNull(),
+    createdBy: text('created_by').notNull(),
+    finishedAt: instant('finished_at'),
+    error: text('error'),
+    result: json('result').$type<EvaluationResult>(),
+    curves: json('curves').$type<FitCurve[]>(),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.id] }),
+    foreignKey({ columns: [table.labId, table.runId], foreignColumns: [runs.labId, runs.id] }),
+    index('evaluations_run').on(table.labId, table.runId, table.createdAt),
+  ],
+);

@@ -1,0 +1,7 @@
+export * from './labs';
+export * from './people';
+export * from './rigs';
+export * from './protocols';
+export * from './runs';
+export * from './data';
+export * from './work';

@@ -1,0 +1,106 @@
+import { sql } from 'drizzle-orm';
+import { bigint, foreignKey, index, integer, json, pgTable, primaryKey, text, uniqueIndex } from 'drizzle-orm/pg-core';
+import type { LinkSettings } from '../../shared/contracts/rigs';
+import type { RigDocument } from '../../shared/rig/document';
+import { instant, key } from './columns';
+import { labs } from './labs';
+import { users } from './people';
+
+export const rigs = pgTable(
+  'rigs',
+  {
+    labId: key('lab_id').notNull().references(() => labs.id),
+    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    name: text('name').notNull(),
+    /** Number of the revision that holds now. */
+    revision: integer('revision').notNull(),
+    createdAt: instant('created_at').notNull(),
+  },
+  (table) => [primaryKey({ columns: [table.labId, table.id] })],
+);
+
+/** Immutable: a trigger refuses UPDATE and DELETE. */
+export const rigRevisions = pgTable(
+  'rig_revisions',
+  {
+    labId: key('lab_id').notNull(),
+    rigId: key('rig_id').notNull(),
+    number: integer('number').notNull(),
+    name: text('name').notNull(),
+    document: json('document').$type<RigDocument>().notNull(),
+    reason: text('reason').notNull(),
+    madeAt: instant('made_at').notNull(),
+    madeById: key('made_by_id').notNull().references(() => users.id),
+    madeBy: text('made_by').notNull(),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.rigId, table.number] }),
+    foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
+  ],
+);
+
+/** How the rig's controller is reached; one row for each rig. */
+export const rigLinks = pgTable(
+  'rig_links',
+  {
+    labId: key('lab_id').notNull(),
+    rigId: key('rig_id').notNull(),
+    settings: json('settings').$type<LinkSettings>().notNull(),
+    changedAt: instant('changed_at').notNull(),
+    changedBy: text('changed_by').notNull(),
+  },
+  (table) => [primaryKey({ columns: [table.labId, table.rigId] }), foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] })],
+);
+
+/** Which process drives the rig. `epoch` rises with each new holder and travels to the controller as a fence. */
+export const rigLeases = pgTable(
+  'rig_leases',
+  {
+    labId: key('lab_id').notNull(),
+    rigId: key('rig_id').notNull(),
+    holder: text('holder').notNull(),
+    epoch: bigint('epoch', { mode: 'number' }).notNull(),
+    untilAt: instant('until_at').notNull(),
+  },
+  (table) => [primaryKey({ columns: [table.labId, table.rigId] }), foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] })],
+);
+
+/** Somebody on site answers for the rig from `fromAt` until `untilAt`, or until the arm is ended earlier. */
+export const arms = pgTable(
+  'arms',
+  {
+    labId: key('lab_id').notNull(),
+    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    rigId: key('rig_id').notNull(),
+    name: text('name').notNull(),
+    note: text('note').notNull().default(''),
+    fromAt: instant('from_at').notNull(),
+    untilAt: instant('until_at').notNull(),
+    armedById: key('armed_by_id').notNull().references(() => users.id),
+    endedAt: instant('ended_at'),
+    endedWhy: text('ended_why'),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.id] }),
+    foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
+    uniqueIndex('arms_one_per_rig').on(table.labId, table.rigId).where(sql`${table.endedAt} is null`),
+    index('arms_rig').on(table.labId, table.rigId, table.fromAt),
+  ],
+);
+
+export const massSets = pgTable(
+  'mass_sets',
+  {
+    labId: key('lab_id').notNull(),
+    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    rigId: key('rig_id').notNull(),
+    label: text('label').notNull(),
+    sources: json('sources').$type<RigDocument['sources']>().notNull(),
+    createdAt: instant('created_at').notNull(),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.id] }),
+    foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
+    uniqueIndex('mass_sets_label').on(table.labId, table.rigId, table.label),
+  ],
+);
