@@ -4,7 +4,7 @@ import type { IdempotencyPort } from '../interfaces/idempotency';
 import type { MailPort } from '../interfaces/mail';
 import type { ServerConfig } from '../interfaces/server-config';
 import type { SessionPort } from '../interfaces/sessions';
-import type { Database } from '../store/database';
+import type { Connection } from '../store/database';
 import type { AccessDirectory } from './access-directory';
 
 /** Everything a route may use; built once by `server/boot/build-server.ts`. */
@@ -18,7 +18,7 @@ export interface Services {
   newToken(): string;
   /** SHA-256 of UTF-8 text, hex. */
   sha256(text: string): string;
-  database: Database;
+  database: Connection;
   sessions: SessionPort;
   access: AccessDirectory;
   idempotency: IdempotencyPort;

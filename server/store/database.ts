@@ -1,0 +1,1 @@
+export { connect, type Connection, type Handle } from '@/db/connect';
