@@ -80,7 +80,8 @@ CREATE TABLE "arms" (
 	"armed_by_id" uuid NOT NULL,
 	"ended_at" timestamp (6) with time zone,
 	"ended_why" text,
-	CONSTRAINT "arms_lab_id_id_pk" PRIMARY KEY("lab_id","id")
+	CONSTRAINT "arms_lab_id_id_pk" PRIMARY KEY("lab_id","id"),
+	CONSTRAINT "arms_length" CHECK ("arms"."until_at" > "arms"."from_at" and "arms"."until_at" <= "arms"."from_at" + interval '72 hours')
 );
 --> statement-breakpoint
 CREATE TABLE "mass_sets" (
@@ -292,8 +293,8 @@ CREATE TABLE "idempotency_keys" (
 	"key" text NOT NULL,
 	"fingerprint" text NOT NULL,
 	"status" integer,
-	"headers" json,
 	"body" json,
+	"etag" text,
 	"claimed_at" timestamp (6) with time zone NOT NULL,
 	"expires_at" timestamp (6) with time zone NOT NULL,
 	CONSTRAINT "idempotency_keys_user_id_key_pk" PRIMARY KEY("user_id","key")

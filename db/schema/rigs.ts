@@ -1,5 +1,5 @@
 import { sql } from 'drizzle-orm';
-import { bigint, foreignKey, index, integer, json, pgTable, primaryKey, text, uniqueIndex } from 'drizzle-orm/pg-core';
+import { bigint, check, foreignKey, index, integer, json, pgTable, primaryKey, text, uniqueIndex } from 'drizzle-orm/pg-core';
 import type { LinkSettings } from '../../shared/contracts/rigs';
 import type { RigDocument } from '../../shared/rig/document';
 import { instant, key } from './columns';
@@ -85,6 +85,7 @@ export const arms = pgTable(
     foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
     uniqueIndex('arms_one_per_rig').on(table.labId, table.rigId).where(sql`${table.endedAt} is null`),
     index('arms_rig').on(table.labId, table.rigId, table.fromAt),
+    check('arms_length', sql`${table.untilAt} > ${table.fromAt} and ${table.untilAt} <= ${table.fromAt} + interval '72 hours'`),
   ],
 );
 

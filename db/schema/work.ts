@@ -33,12 +33,12 @@ export const idempotencyKeys = pgTable(
   {
     userId: key('user_id').notNull().references(() => users.id, { onDelete: 'cascade' }),
     key: text('key').notNull(),
-    /** SHA-256 (hex) of method, path and body. */
+    /** SHA-256 (hex) of method, path, preconditions and body. */
     fingerprint: text('fingerprint').notNull(),
     /** Null while the first is still at work. */
     status: integer('status'),
-    headers: json('headers').$type<Record<string, string>>(),
     body: json('body').$type<unknown>(),
+    etag: text('etag'),
     claimedAt: instant('claimed_at').notNull(),
     expiresAt: instant('expires_at').notNull(),
   },
