@@ -28,4 +28,4 @@ config.server.enhanceMiddleware = (middleware) => (request, response, next) => {
   return undefined;
 };
 
-module.exports = withNativeWind(config, { input: './global.css' });
+module.exports = withNativeWind(config, { input: './global.css', disableTypeScriptGeneration: true });

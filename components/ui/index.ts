@@ -1,6 +1,7 @@
 export { Button, IconButton, type ButtonKind, type ButtonProps } from './button';
 export { Chip } from './chip';
 export { Field, FieldFrame, Select, type FieldProps } from './field';
+export { FormField, showProblem } from './form-field';
 export { Icon, type IconName } from './icon';
 export { Panel, Row, Section } from './panel';
 export { Screen } from './screen';

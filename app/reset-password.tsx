@@ -1,0 +1,5 @@
+import { ResetPasswordScreen } from '@/components/people/reset-password-screen';
+
+export default function ResetPassword() {
+  return <ResetPasswordScreen />;
+}

@@ -1,0 +1,46 @@
+import { zodResolver } from '@hookform/resolvers/zod';
+import { useForm } from 'react-hook-form';
+import { View } from 'react-native';
+import { call } from '@/components/api';
+import { Body, Button, FormField, showProblem } from '@/components/ui';
+import { signIn, type Me } from '@/shared/contracts/people';
+
+interface CredentialsFormProps {
+  /** Given when the person is known and only the session ended. */
+  email?: string;
+  onSignedIn: (me: Me) => void;
+}
+
+/** E-mail and password; what was typed stays when the server refuses. */
+export function CredentialsForm({ email, onSignedIn }: CredentialsFormProps) {
+  const { control, handleSubmit, setError, formState } = useForm({ resolver: zodResolver(signIn.body), defaultValues: { email: email ?? '', password: '' } });
+  const submit = handleSubmit(async (body) => {
+    try {
+      onSignedIn((await call(signIn, { body })).data);
+    } catch (error) {
+      showProblem(error, ['email', 'password'], setError);
+    }
+  });
+  const send = () => void submit();
+  return (
+    <form
+      className="contents"
+      noValidate
+      onSubmit={(event) => {
+        event.preventDefault();
+        send();
+      }}
+    >
+      <View className="gap-5">
+        <FormField control={control} name="email" label="E-mail" type="email" autoComplete="username" testID="sign-in-email" />
+        <FormField control={control} name="password" label="Password" type="password" autoComplete="current-password" onEnter={send} testID="sign-in-password" />
+        {formState.errors.root === undefined ? null : (
+          <Body role="alert" tone="danger">
+            {formState.errors.root.message}
+          </Body>
+        )}
+        <Button kind="primary" label="Sign in" size="action" onPress={send} busy={formState.isSubmitting} testID="sign-in" />
+      </View>
+    </form>
+  );
+}

@@ -1,0 +1,56 @@
+import type { ReactNode } from 'react';
+import { ScrollView, View } from 'react-native';
+import Svg, { Circle, Line } from 'react-native-svg';
+import { useTheme } from '@/components/theme';
+import { Body, Heading } from '@/components/ui';
+
+interface PublicPageProps {
+  title: string;
+  intro?: string;
+  children?: ReactNode;
+}
+
+/** The frame of the pages that need no session: the mark, one heading, one column. */
+export function PublicPage({ title, intro, children }: PublicPageProps) {
+  return (
+    <ScrollView role="main" className="flex-1 bg-ink" contentContainerClassName="min-h-full items-center justify-center px-4 py-10" keyboardShouldPersistTaps="handled">
+      <View className="w-full max-w-[400px] gap-6">
+        <View className="gap-5">
+          <Mark />
+          <View className="gap-2">
+            <Heading level={1} size={30}>
+              {title}
+            </Heading>
+            {intro === undefined ? null : (
+              <Body tone="dim" size={15}>
+                {intro}
+              </Body>
+            )}
+          </View>
+        </View>
+        {children}
+      </View>
+    </ScrollView>
+  );
+}
+
+/** The turntable from above, sources at near: the mark of Evenfall. */
+function Mark() {
+  const { colors } = useTheme();
+  return (
+    <View className="flex-row items-center gap-4">
+      <Svg width={64} height={64} viewBox="0 0 64 64" aria-hidden>
+        <Circle cx={32} cy={32} r={30} fill="none" stroke={colors.line} strokeWidth={2.5} />
+        <Line x1={12} y1={32} x2={52} y2={32} stroke={colors.dim} strokeWidth={2} />
+        <Circle cx={32} cy={32} r={2} fill={colors.lamp} />
+        <Circle cx={52} cy={32} r={4} fill={colors.text} />
+        <Circle cx={12} cy={32} r={4} fill={colors.text} />
+        <Circle cx={55} cy={20} r={7} fill={colors.near} />
+        <Circle cx={9} cy={44} r={7} fill={colors.near} />
+      </Svg>
+      <Body size={20} strong tone="lamp">
+        Evenfall
+      </Body>
+    </View>
+  );
+}
