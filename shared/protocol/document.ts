@@ -100,7 +100,7 @@ const repeatSchema = z
     counting: z.enum(['all', 'good']).optional(),
     order: z.enum(['as written', 'shuffled']).optional(),
     get steps(): z.ZodArray<typeof stepSchema> {
-      return z.array(stepSchema).min(1);
+      return z.array(stepSchema);
     },
     ...label,
   })
@@ -171,7 +171,8 @@ export const protocolDocumentSchema = z.strictObject({
   atEnd: z.strictObject({ station: z.string().min(1).optional(), drivers: z.enum(['keep', 'release']).optional() }).optional(),
   goodWhen: goodWhenSchema.optional(),
   evaluation: registeredEvaluationSchema.optional(),
-  steps: z.array(stepSchema).min(1),
+  /** May be empty in a draft; `check` refuses that. */
+  steps: z.array(stepSchema),
 });
 
 export type ProtocolDocument = z.infer<typeof protocolDocumentSchema>;

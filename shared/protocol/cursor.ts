@@ -1,0 +1,134 @@
+import type { RepeatStep, Step } from './document';
+import { nextOccurrenceUtcMs } from './durations';
+import { type LeafStep, type ProtocolPlan, stateAfterIfPossible } from './step-effect';
+
+export type { LeafStep, ProtocolPlan } from './step-effect';
+
+/** A protocol executes at most this many steps. */
+export const greatestStepCount = 10_000;
+
+/** One list of steps being worked through: the outermost one, or that of a repeat. */
+interface CursorFrame {
+  /** Position (from 0) of the step that comes next. In the frames below the innermost: of the repeat being repeated. */
+  next: number;
+  /** Pass of the repeat this list belongs to, from 1; 0 for the outermost list. */
+  pass: number;
+  /** For a repeat until a local time: that instant, fixed when the repeat began. */
+  deadlineUtcMs: number | null;
+}
+
+/** Where a run stands in its protocol. Plain JSON: it is part of the run's snapshot. */
+export interface CursorState {
+  frames: CursorFrame[];
+  /** Steps given out so far. */
+  executed: number;
+  /** The swing to the station of `atEnd` has been given out. */
+  atEndGiven: boolean;
+}
+
+export interface PlannedItem {
+  /** With pass numbers: `2.repeat[3].1.swing`; `atEnd.swing` for the last move. */
+  path: string;
+  /** As in the document: `2.repeat.1.swing`. */
+  documentPath: string;
+  step: LeafStep;
+}
+
+export interface CursorMoment {
+  utcMs: number;
+  /** Turntable angle, deg. */
+  angleDeg: number;
+}
+
+/** The cursor before the first step. */
+export function beginCursor(): CursorState {
+  return { frames: [{ next: 0, pass: 0, deadlineUtcMs: null }], executed: 0, atEndGiven: false };
+}
+
+/**
+ * The next step to execute, and the cursor after it; `item` is null when the protocol is finished. Called once for each executed
+ * step, at the moment the step before it ended: that is when a repeat decides whether another pass begins. Pure, so a look ahead
+ * is a call whose cursor is dropped.
+ * @throws RangeError beyond 10,000 executed steps, and for a repeat that goes round without a step.
+ */
+export function advanceCursor(plan: ProtocolPlan, cursor: CursorState, moment: CursorMoment): { item: PlannedItem | null; cursor: CursorState } {
+  const frames = cursor.frames.map((frame) => ({ ...frame }));
+  for (let decisions = 0; decisions <= greatestStepCount; decisions += 1) {
+    const lists = listsOf(plan.protocol.steps, frames);
+    const frame = frames[frames.length - 1];
+    const step = frame && lists[lists.length - 1]?.[frame.next];
+    if (frame === undefined) break;
+    if (step === undefined) {
+      if (frames.length === 1) return atEnd(plan, { ...cursor, frames });
+      const repeat = lists[lists.length - 2]?.[frames[frames.length - 2]?.next ?? -1] as RepeatStep;
+      if (anotherPass(repeat, frame, { plan, moment })) Object.assign(frame, { next: 0, pass: frame.pass + 1 });
+      else {
+        frames.pop();
+        (frames[frames.length - 1] as CursorFrame).next += 1;
+      }
+    } else if (step.kind === 'repeat') {
+      const inner: CursorFrame = { next: 0, pass: 0, deadlineUtcMs: deadlineOf(step, plan, moment) };
+      if (step.steps.length > 0 && anotherPass(step, inner, { plan, moment })) frames.push({ ...inner, pass: 1 });
+      else frame.next += 1;
+    } else {
+      const item = itemOf(lists, frames, step);
+      frame.next += 1;
+      if (cursor.executed >= greatestStepCount) throw new RangeError(`a protocol executes at most ${greatestStepCount} steps`);
+      return { item, cursor: { ...cursor, frames, executed: cursor.executed + 1 } };
+    }
+  }
+  throw new RangeError('a repeat goes round without a step');
+}
+
+/** The lists of steps that the frames work through, outermost first. */
+function listsOf(steps: readonly Step[], frames: readonly CursorFrame[]): (readonly Step[])[] {
+  const lists = [steps];
+  for (const frame of frames.slice(0, -1)) {
+    const step = lists[lists.length - 1]?.[frame.next];
+    lists.push(step?.kind === 'repeat' ? step.steps : []);
+  }
+  return lists;
+}
+
+function itemOf(lists: readonly (readonly Step[])[], frames: readonly CursorFrame[], step: LeafStep): PlannedItem {
+  const parts = frames.map((frame, depth) => {
+    const kind = lists[depth]?.[frame.next]?.kind ?? '';
+    return { plain: `${frame.next + 1}.${kind}`, pass: frames[depth + 1]?.pass };
+  });
+  return {
+    path: parts.map(({ plain, pass }) => (pass === undefined ? plain : `${plain}[${pass}]`)).join('.'),
+    documentPath: parts.map(({ plain }) => plain).join('.'),
+    step,
+  };
+}
+
+function atEnd(plan: ProtocolPlan, cursor: CursorState): { item: PlannedItem | null; cursor: CursorState } {
+  const station = plan.protocol.atEnd?.station;
+  if (station === undefined || cursor.atEndGiven) return { item: null, cursor };
+  const item: PlannedItem = { path: 'atEnd.swing', documentPath: 'atEnd.swing', step: { kind: 'swing', to: station } };
+  return { item, cursor: { ...cursor, executed: cursor.executed + 1, atEndGiven: true } };
+}
+
+function deadlineOf(repeat: RepeatStep, plan: ProtocolPlan, moment: CursorMoment): number | null {
+  if (repeat.until === undefined || !('localTime' in repeat.until)) return null;
+  return nextOccurrenceUtcMs({ localTime: repeat.until.localTime, timeZone: plan.timeZone, utcMs: moment.utcMs });
+}
+
+function anotherPass(repeat: RepeatStep, frame: CursorFrame, context: { plan: ProtocolPlan; moment: CursorMoment }): boolean {
+  if (frame.deadlineUtcMs !== null) return passEndsBy(repeat, frame.deadlineUtcMs, context);
+  return frame.pass < (repeat.times ?? 0);
+}
+
+/** Whether a pass of the repeat that began at the moment would end, by plan, no later than the deadline. */
+function passEndsBy(repeat: RepeatStep, deadlineUtcMs: number, { plan, moment }: { plan: ProtocolPlan; moment: CursorMoment }): boolean {
+  const passPlan: ProtocolPlan = { ...plan, protocol: { steps: repeat.steps } };
+  let state = { ...moment, swingStartUtcMs: null as number | null };
+  let cursor = beginCursor();
+  while (state.utcMs <= deadlineUtcMs) {
+    const next = advanceCursor(passPlan, cursor, state);
+    if (next.item === null) return true;
+    cursor = next.cursor;
+    state = stateAfterIfPossible(next.item.step, plan, state);
+  }
+  return false;
+}

@@ -1,0 +1,69 @@
+import type { RigDocument } from '../rig/document';
+import type { ProtocolDocument, RepeatStep, Step } from './document';
+import { dwellEndUtcMs, homeDurationS, settleEndUtcMs, swingMove, UnplayableStep, waitUntilLocalTime } from './durations';
+import { stationAt } from './stations';
+
+export type LeafStep = Exclude<Step, RepeatStep>;
+
+/** What a protocol is carried out on. */
+export interface ProtocolPlan {
+  protocol: Pick<ProtocolDocument, 'steps' | 'atEnd'>;
+  rig: RigDocument;
+  /** IANA zone of the lab. */
+  timeZone: string;
+}
+
+export interface PlanState {
+  utcMs: number;
+  /** Turntable angle, deg. */
+  angleDeg: number;
+  /** Start of the swing that has just ended; null when anything else came after it. */
+  swingStartUtcMs: number | null;
+}
+
+/**
+ * The state after a step if all goes by plan. A mark takes no time; a step whose end no plan can know (a condition, a person) and
+ * the kinds that are not built yet count as none.
+ * @throws UnplayableStep where the step cannot be carried out on the rig.
+ */
+export function stateAfter(step: LeafStep, plan: Pick<ProtocolPlan, 'rig' | 'timeZone'>, state: PlanState): PlanState {
+  const { rig, timeZone } = plan;
+  const at = (utcMs: number, angleDeg = state.angleDeg): PlanState => ({ utcMs, angleDeg, swingStartUtcMs: null });
+  switch (step.kind) {
+    case 'home':
+      return at(state.utcMs + homeDurationS(rig, state.angleDeg) * 1000, rig.motion?.homeDeg);
+    case 'swing': {
+      const move = swingMove(step, rig, state.angleDeg);
+      return { utcMs: state.utcMs + move.durationS * 1000, angleDeg: move.targetDeg, swingStartUtcMs: state.utcMs };
+    }
+    case 'dwell':
+      return at(dwellEndUtcMs(step, rig, { startUtcMs: state.utcMs, swingStartUtcMs: state.swingStartUtcMs }));
+    case 'settle':
+      return at(settleEndUtcMs(step, state.utcMs));
+    case 'wait':
+      if (!('localTime' in step.until)) return at(state.utcMs);
+      return at(waitUntilLocalTime({ localTime: step.until.localTime, timeZone, utcMs: state.utcMs, ifPast: step.until.ifPast ?? 'continue' }).endUtcMs);
+    default:
+      return at(state.utcMs);
+  }
+}
+
+/**
+ * As `stateAfter`, for drafts and for looking ahead: a step that cannot be carried out is passed over, and a beat whose swing is not known
+ * counts from its own start, which is the longest it can be.
+ */
+export function stateAfterIfPossible(step: LeafStep, plan: Pick<ProtocolPlan, 'rig' | 'timeZone'>, state: PlanState): PlanState {
+  const beatAlone = step.kind === 'dwell' && step.beat_periods !== undefined && state.swingStartUtcMs === null;
+  try {
+    return stateAfter(step, plan, beatAlone ? { ...state, swingStartUtcMs: state.utcMs } : state);
+  } catch (error) {
+    if (error instanceof UnplayableStep) return { ...state, swingStartUtcMs: null };
+    throw error;
+  }
+}
+
+/** Station at which the sources stand in a state: the target's own name after a swing to it, else the first one at that angle. */
+export function stationAfter(step: LeafStep, rig: RigDocument, after: { angleDeg: number; stationBefore: string; angleBeforeDeg: number }): string {
+  if (step.kind === 'swing' && typeof step.to === 'string') return step.to;
+  return after.angleDeg === after.angleBeforeDeg ? after.stationBefore : stationAt(rig, after.angleDeg);
+}
