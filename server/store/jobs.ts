@@ -1,0 +1,65 @@
+import { and, eq, sql } from 'drizzle-orm';
+import { jobs } from '@/db/schema';
+import { timestampOfUtcMs } from '@/db/schema/columns';
+import type { Job, JobQueue } from '../interfaces/jobs';
+import { one, type Database, type Handle } from './database';
+
+const leaseMs = 30_000;
+const firstRetryMs = 5_000;
+const longestRetryMs = 3_600_000;
+
+/** Asks for work, in the transaction of the fact that causes it. */
+export async function enqueueJob(
+  db: Handle,
+  job: { kind: string; payload: unknown; labId: string | null; nowUtcMs: number; dueAtUtcMs?: number; maxAttempts?: number },
+): Promise<{ id: string }> {
+  const { nowUtcMs, dueAtUtcMs = nowUtcMs, maxAttempts = 8, ...fields } = job;
+  const row = one(await db.insert(jobs).values({ ...fields, maxAttempts, dueAt: dueAtUtcMs, createdAt: nowUtcMs }).returning({ id: jobs.id }));
+  return row;
+}
+
+/**
+ * The queue of one worker. A job is leased for 30 s and taken with `FOR UPDATE SKIP LOCKED`, so that workers never
+ * wait for each other; attempts are 5 s, 10 s, 20 s … at most 1 h apart.
+ * @param holder name of this worker, for people who look into the table
+ */
+export function createJobQueue(db: Database, holder: string, nowUtcMs: () => number): JobQueue {
+  // The attempt's number fences: whoever lost the lease and comes back late holds a lower one.
+  const held = (job: Job) => and(eq(jobs.id, job.id), eq(jobs.state, 'running'), eq(jobs.attempts, job.attempt));
+  return {
+    take: (kinds) => take(db, { kinds, holder, nowUtcMs: nowUtcMs() }),
+    renew: async (job) => {
+      const renewed = await db.update(jobs).set({ leaseUntil: nowUtcMs() + leaseMs }).where(held(job));
+      return renewed.rowCount === 1;
+    },
+    finish: async (job) => {
+      await db.update(jobs).set({ state: 'done', finishedAt: nowUtcMs(), leaseUntil: null, lastError: null }).where(held(job));
+    },
+    fail: async (job, why) => {
+      const last = job.attempt >= job.maxAttempts;
+      const retryMs = Math.min(longestRetryMs, firstRetryMs * 2 ** (job.attempt - 1));
+      const next = last ? { state: 'given-up' as const, finishedAt: nowUtcMs() } : { state: 'waiting' as const, dueAt: nowUtcMs() + retryMs };
+      await db.update(jobs).set({ ...next, leaseUntil: null, lastError: why.slice(0, 2000) }).where(held(job));
+    },
+  };
+}
+
+async function take(db: Database, want: { kinds: readonly string[]; holder: string; nowUtcMs: number }): Promise<Job | null> {
+  const now = sql`${timestampOfUtcMs(want.nowUtcMs)}::timestamptz`;
+  const lapsed = sql`(${jobs.state} = 'running' and ${jobs.leaseUntil} <= ${now})`;
+  // A job that brings its worker down each time must not do so for ever.
+  await db.update(jobs).set({ state: 'given-up', finishedAt: want.nowUtcMs, leaseUntil: null, lastError: 'the worker died during the last attempt' }).where(sql`${lapsed} and ${jobs.attempts} >= ${jobs.maxAttempts}`);
+  const next = db
+    .select({ id: jobs.id })
+    .from(jobs)
+    .where(sql`${jobs.kind} in ${[...want.kinds]} and ((${jobs.state} = 'waiting' and ${jobs.dueAt} <= ${now}) or ${lapsed})`)
+    .orderBy(jobs.dueAt)
+    .limit(1)
+    .for('update', { skipLocked: true });
+  const [row] = await db
+    .update(jobs)
+    .set({ state: 'running', attempts: sql`${jobs.attempts} + 1`, holder: want.holder, leaseUntil: want.nowUtcMs + leaseMs })
+    .where(eq(jobs.id, sql`(${next})`))
+    .returning();
+  return row === undefined ? null : { id: row.id, labId: row.labId, kind: row.kind, payload: row.payload, attempt: row.attempts, maxAttempts: row.maxAttempts };
+}

@@ -1,0 +1,116 @@
+import { and, asc, eq, notInArray, sql } from 'drizzle-orm';
+import { runEvents, runs, runSteps } from '@/db/schema';
+import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
+import type { RunState } from '@/shared/contracts/runs';
+import { StaleRunError, type RunStore, type RunWrite, type StoredRun } from '../interfaces/run-store';
+import { isAlreadyThere, type Database, type Handle, type Transaction } from './database';
+
+/** Rows of one INSERT: PostgreSQL takes at most 65 535 parameters a statement. */
+const rowsAtOnce = 2000;
+const endedStates: RunState[] = ['finished', 'stopped', 'failed'];
+
+export interface NewRun {
+  start: RunStart;
+  protocolId: string | null;
+  massSetId: string | null;
+  state: RunState;
+  nowUtcMs: number;
+  predictedEndUtcMs: number | null;
+}
+
+/**
+ * Adds a run before its first motion; a rehearsal is one with `start.simulated`.
+ * @returns false when another run of the rig has not ended (nothing is written then; inside a transaction it is over)
+ */
+export async function insertRun(db: Handle, run: NewRun): Promise<boolean> {
+  const { start } = run;
+  try {
+    await db.insert(runs).values({
+      labId: start.labId, id: start.runId, rigId: start.rigId, rigRevision: start.rigRevision, protocolId: run.protocolId, massSetId: run.massSetId,
+      rehearsal: start.simulated !== null, start, state: run.state, createdAt: run.nowUtcMs, predictedEndAt: run.predictedEndUtcMs,
+      rigName: start.rigName, protocolName: start.protocolName, protocolRevision: start.protocolRevision, massSetLabel: start.massSetLabel, operator: start.operator,
+    });
+    return true;
+  } catch (error) {
+    if (isAlreadyThere(error, 'runs_one_per_rig')) return false;
+    throw error;
+  }
+}
+
+/** Runs in PostgreSQL. One commit is one transaction; the chain's end in `runs` is the fence against a second writer. */
+export function createRunStore(db: Database): RunStore {
+  return {
+    load: async (labId, runId) => {
+      const [row] = await db.select(storedColumns).from(runs).where(and(eq(runs.labId, labId), eq(runs.id, runId)));
+      return row === undefined ? null : storedRunOf(row);
+    },
+    unfinished: async () => {
+      const rows = await db.select(storedColumns).from(runs).where(and(eq(runs.rehearsal, false), notInArray(runs.state, endedStates))).orderBy(asc(runs.createdAt));
+      return rows.map(storedRunOf);
+    },
+    commit: (write) => db.transaction((tx) => commit(tx, write)),
+  };
+}
+
+const storedColumns = { start: runs.start, snapshot: runs.snapshot, chartVersion: runs.chartVersion, lastSeq: runs.lastSeq, lastHash: runs.lastHash };
+
+const storedRunOf = (row: { start: RunStart; snapshot: unknown; chartVersion: number; lastSeq: number; lastHash: string }): StoredRun => ({
+  start: row.start, snapshot: row.snapshot, chartVersion: row.chartVersion, chain: { seq: row.lastSeq, hash: row.lastHash },
+});
+
+async function commit(tx: Transaction, write: RunWrite): Promise<void> {
+  const own = and(eq(runs.labId, write.labId), eq(runs.id, write.runId));
+  const [row] = await tx.select({ lastSeq: runs.lastSeq, lastHash: runs.lastHash }).from(runs).where(own).for('update');
+  if (row === undefined) throw new Error(`run ${write.runId} is not in the database: insert it before the first commit`);
+  if (row.lastSeq !== write.expectedSeq) {
+    throw new StaleRunError(`the chain of run ${write.runId} ends at ${row.lastSeq}, the writer believes ${write.expectedSeq}: somebody else drives this run`);
+  }
+  const end = followChain({ seq: row.lastSeq, hash: row.lastHash }, write.events);
+  await insertEvents(tx, write);
+  await putSteps(tx, write);
+  const { summary } = write;
+  await tx
+    .update(runs)
+    .set({
+      snapshot: write.snapshot, chartVersion: write.chartVersion, lastSeq: end.seq, lastHash: end.hash, state: summary.state as RunState, outcome: summary.outcome,
+      startedAt: summary.startedAtUtcMs, endedAt: summary.endedAtUtcMs, predictedEndAt: summary.predictedEndUtcMs,
+    })
+    .where(own);
+}
+
+/** The end of the chain after `events`; a gap or a wrong `prev` is refused before anything is written. */
+function followChain(from: { seq: number; hash: string }, events: readonly ChainedEvent[]): { seq: number; hash: string } {
+  let end = from;
+  for (const event of events) {
+    if (event.seq !== end.seq + 1 || event.prev !== end.hash) throw new Error(`event ${event.seq} does not continue the chain, which ends at ${end.seq}`);
+    end = { seq: event.seq, hash: event.hash };
+  }
+  return end;
+}
+
+async function insertEvents(tx: Transaction, write: RunWrite): Promise<void> {
+  const own = { labId: write.labId, runId: write.runId };
+  for (const part of partsOf(write.events)) await tx.insert(runEvents).values(part.map((event) => ({ ...own, ...event })));
+}
+
+async function putSteps(tx: Transaction, write: RunWrite): Promise<void> {
+  const own = { labId: write.labId, runId: write.runId };
+  const lastOfEach = [...new Map(write.steps.map((step) => [step.seq, step])).values()];
+  for (const part of partsOf(lastOfEach)) {
+    await tx
+      .insert(runSteps)
+      .values(part.map((step) => ({ ...own, ...step })))
+      .onConflictDoUpdate({ target: [runSteps.labId, runSteps.runId, runSteps.seq], set: replacedByNew });
+  }
+}
+
+const excluded = (column: string) => sql.raw(`excluded.${column}`);
+const stepColumns = {
+  path: 'path', kind: 'kind', label: 'label', station: 'station', plannedStartUtcMs: 'planned_start', plannedEndUtcMs: 'planned_end', startUtcMs: 'started_at', endUtcMs: 'ended_at',
+  uStartS: 'u_start_s', uEndS: 'u_end_s', angleStartDeg: 'angle_start_deg', angleEndDeg: 'angle_end_deg', outcome: 'outcome', angleSource: 'angle_source', uAngleDeg: 'u_angle_deg', good: 'good',
+} satisfies Record<Exclude<keyof StepRow, 'seq'>, string>;
+const replacedByNew = Object.fromEntries(Object.entries(stepColumns).map(([field, column]) => [field, excluded(column)]));
+
+function* partsOf<T>(rows: readonly T[]): Generator<T[]> {
+  for (let from = 0; from < rows.length; from += rowsAtOnce) yield rows.slice(from, from + rowsAtOnce);
+}

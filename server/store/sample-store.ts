@@ -1,0 +1,90 @@
+import { pipeline } from 'node:stream/promises';
+import { Readable } from 'node:stream';
+import type { PoolClient } from 'pg';
+import { from as copyFrom, to as copyTo } from 'pg-copy-streams';
+import { isKey, timestampOfUtcMs } from '@/db/schema/columns';
+import type { SampleBatch, SampleStore } from '../interfaces/sample-store';
+import type { Connection } from './database';
+import { decodeSamples, encodeSamples, microsecondsOf } from './sample-copy';
+
+/** From this many samples on COPY is worth its temporary table. */
+const copyFromCount = 2000;
+
+/** A batch that cannot be stored: says which sample and why. */
+export class UnusableBatchError extends Error {
+  override readonly name = 'UnusableBatchError';
+}
+
+/** Samples in PostgreSQL: the same instant of a channel is stored once, whatever is sent again. */
+export function createSampleStore(connection: Connection): SampleStore {
+  return {
+    append: (labId, channelId, batch) => connection.bulk((client) => appendSamples(client, { labId, channelId }, batch)),
+    read: (labId, channelId, window) => connection.bulk((client) => readSamples(client, { labId, channelId }, window)),
+  };
+}
+
+interface ChannelKey {
+  labId: string;
+  channelId: string;
+}
+
+/**
+ * Appends within the transaction of `client`, all or none.
+ * @throws UnusableBatchError for a channel that is not of this lab, unequal lengths, or a number that is not finite
+ */
+export async function appendSamples(client: PoolClient, channel: ChannelKey, batch: SampleBatch): Promise<{ stored: number; known: number }> {
+  assertUsable(batch);
+  await assertChannel(client, channel);
+  const count = batch.utcMs.length;
+  if (count === 0) return { stored: 0, known: 0 };
+  const stored = count < copyFromCount ? await insertFew(client, channel, batch) : await copyMany(client, channel, batch);
+  return { stored, known: count - stored };
+}
+
+function assertUsable({ utcMs, value }: SampleBatch): void {
+  if (utcMs.length !== value.length) throw new UnusableBatchError(`${utcMs.length} instants came with ${value.length} values; each sample has one of both`);
+  const bad = utcMs.findIndex((at, index) => !Number.isFinite(at) || !Number.isFinite(value[index]));
+  if (bad >= 0) throw new UnusableBatchError(`sample ${bad + 1} of the batch is (${utcMs[bad]}, ${value[bad]}); instant and value must be finite numbers`);
+}
+
+/** In place of a foreign key: the channel is of this lab and stays there until the transaction ends. */
+async function assertChannel(client: PoolClient, { labId, channelId }: ChannelKey): Promise<void> {
+  const known = isKey(labId) && isKey(channelId) && (await client.query('select 1 from channels where lab_id = $1 and id = $2 for key share', [labId, channelId])).rowCount === 1;
+  if (!known) throw new UnusableBatchError(`there is no channel ${channelId} in this lab`);
+}
+
+async function insertFew(client: PoolClient, { labId, channelId }: ChannelKey, batch: SampleBatch): Promise<number> {
+  const result = await client.query(
+    `insert into samples (lab_id, channel_id, at, value)
+     select $1, $2, at, value from unnest($3::timestamptz[], $4::double precision[]) as batch (at, value) on conflict do nothing`,
+    [labId, channelId, Array.from(batch.utcMs, timestampOfUtcMs), Array.from(batch.value)],
+  );
+  return result.rowCount ?? 0;
+}
+
+async function copyMany(client: PoolClient, { labId, channelId }: ChannelKey, batch: SampleBatch): Promise<number> {
+  await client.query('create temporary table if not exists arriving_samples (at timestamptz not null, value double precision not null) on commit delete rows');
+  await client.query('truncate arriving_samples');
+  await pipeline(Readable.from(encodeSamples(batch)), client.query(copyFrom('copy arriving_samples (at, value) from stdin (format binary)')));
+  const result = await client.query('insert into samples (lab_id, channel_id, at, value) select $1, $2, at, value from arriving_samples order by at on conflict do nothing', [labId, channelId]);
+  return result.rowCount ?? 0;
+}
+
+/** Samples of a channel with `fromUtcMs` ≤ instant ≤ `toUtcMs`, in time order. */
+export async function readSamples(client: PoolClient, { labId, channelId }: ChannelKey, window: { fromUtcMs: number; toUtcMs: number }): Promise<SampleBatch> {
+  if (!isKey(labId) || !isKey(channelId)) return { utcMs: new Float64Array(), value: new Float64Array() };
+  // COPY takes no parameters: both ids have the form of a UUID (just checked) and the instants are whole microseconds.
+  const between = `at between ${instantSql(window.fromUtcMs)} and ${instantSql(window.toUtcMs)}`;
+  const stream = client.query(copyTo(`copy (select at, value from samples where lab_id = '${labId}' and channel_id = '${channelId}' and ${between} order by at) to stdout (format binary)`));
+  return decodeSamples(stream);
+}
+
+/** Bounds beyond what PostgreSQL can write stand for all time. */
+function instantSql(utcMs: number): string {
+  if (utcMs <= earliestUtcMs) return `'-infinity'::timestamptz`;
+  if (utcMs >= latestUtcMs) return `'infinity'::timestamptz`;
+  return `('epoch'::timestamptz + ${microsecondsOf(utcMs)} * interval '1 microsecond')`;
+}
+
+const earliestUtcMs = Date.UTC(1, 0, 1);
+const latestUtcMs = Date.UTC(9999, 0, 1);
