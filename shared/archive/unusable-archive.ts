@@ -1,0 +1,16 @@
+/** Why an archive cannot be evaluated, with the place. The message is a whole sentence for people. */
+export class UnusableArchive extends Error {
+  readonly code = 'unusable-archive';
+  /** File inside the archive; null when it is about the archive itself. */
+  readonly file: string | null;
+  /** Line of the file, counted from 1 with the header, as an editor shows it. */
+  readonly row: number | null;
+
+  constructor(place: { file: string | null; row?: number; column?: string }, why: string) {
+    const parts = [place.file, place.row === undefined ? null : `row ${place.row}`, place.column === undefined ? null : `column ${place.column}`];
+    const where = parts.filter((part) => part !== null).join(', ');
+    super(where === '' ? why : `${where}: ${why}`);
+    this.file = place.file;
+    this.row = place.row ?? null;
+  }
+}
