@@ -122,6 +122,21 @@ export const stepSchema: z.ZodType<Step> = z.lazy(() =>
   ]),
 ) as unknown as z.ZodType<Step>;
 
+/** The fields that each step kind takes, `kind` first. */
+export const stepFields: Record<StepKind, string[]> = {
+  home: Object.keys(homeSchema.shape),
+  swing: Object.keys(swingSchema.shape),
+  dwell: Object.keys(dwellSchema.shape),
+  kick: Object.keys(kickSchema.shape),
+  settle: Object.keys(settleSchema.shape),
+  wait: Object.keys(waitSchema.shape),
+  proof: Object.keys(proofSchema.shape),
+  mark: Object.keys(markSchema.shape),
+  prompt: Object.keys(promptSchema.shape),
+  rotate: Object.keys(rotateSchema.shape),
+  repeat: Object.keys(repeatSchema.shape),
+};
+
 export type HomeStep = z.infer<typeof homeSchema>;
 export type SwingStep = z.infer<typeof swingSchema>;
 export type DwellStep = z.infer<typeof dwellSchema>;
@@ -174,5 +189,8 @@ export const protocolDocumentSchema = z.strictObject({
   /** May be empty in a draft; `check` refuses that. */
   steps: z.array(stepSchema),
 });
+
+/** The fields of the document itself. */
+export const documentFields: string[] = Object.keys(protocolDocumentSchema.shape);
 
 export type ProtocolDocument = z.infer<typeof protocolDocumentSchema>;
