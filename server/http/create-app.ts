@@ -59,10 +59,9 @@ const noStore: RequestHandler = (_req, res, next) => {
 };
 
 function answerProblems(services: Services): ErrorRequestHandler {
-  // Express knows an error handler by its four parameters.
-  return (error: unknown, req, res, _next) => {
+  const answer = (...[error, req, res]: Parameters<ErrorRequestHandler>): void => {
     const problem = problemErrorOf(error);
-    if (problemCodes[problem.code] >= 500) services.log.error({ err: error, requestId: requestIdOf(res) }, 'a request failed');
+    if (problemCodes[problem.code] >= 500) services.log.error({ err: error as Error, requestId: requestIdOf(res) }, 'a request failed');
     if (res.headersSent) {
       res.destroy();
       return;
@@ -73,4 +72,6 @@ function answerProblems(services: Services): ErrorRequestHandler {
     req.unpipe();
     req.resume();
   };
+  // Express tells an error handler from others by its number of parameters.
+  return Object.defineProperty(answer, 'length', { value: 4 });
 }

@@ -1,4 +1,5 @@
 import * as z from 'zod';
+import { NotYetError } from '@/shared/lib/not-yet-error';
 import { ProblemError, type ProblemItem } from './problem-error';
 
 const pathOf = (path: readonly PropertyKey[]) => path.map(String).join('.');
@@ -62,6 +63,7 @@ const isFileError = (error: ErrorLike) => error.code === 'ENOENT' && error.sysca
 /** Every failure as a problem; what nobody foresaw becomes `internal` and tells nothing of the inside. */
 export function problemErrorOf(error: unknown): ProblemError {
   if (error instanceof ProblemError) return error;
+  if (error instanceof NotYetError) return new ProblemError('not-yet', error.message);
   if (isErrorLike(error)) {
     const known = typeof error.type === 'string' ? bodyErrors[error.type] : undefined;
     if (known !== undefined) return known();

@@ -1,7 +1,7 @@
 import { and, asc, desc, eq, max } from 'drizzle-orm';
 import { protocolRevisions, protocols, runs } from '@/db/schema';
 import type { ProtocolDocument } from '@/shared/protocol/document';
-import type { Handle } from './database';
+import { one, type Handle } from './database';
 import type { Maker } from './rigs';
 
 export type ProtocolRecord = typeof protocols.$inferSelect;
@@ -26,12 +26,8 @@ export async function findProtocol(db: Handle, labId: string, protocolId: string
 
 /** Adds a protocol with its first draft. Returns its id. */
 export async function createProtocol(db: Handle, protocol: { labId: string; document: ProtocolDocument }, maker: Maker): Promise<string> {
-  const [row] = await db
-    .insert(protocols)
-    .values({ labId: protocol.labId, name: protocol.document.name, document: protocol.document, updatedAt: maker.at, updatedById: maker.userId, updatedBy: maker.name })
-    .returning({ id: protocols.id });
-  if (row === undefined) throw new Error('the new protocol was not returned');
-  return row.id;
+  const fields = { labId: protocol.labId, name: protocol.document.name, document: protocol.document, updatedAt: maker.at, updatedById: maker.userId, updatedBy: maker.name };
+  return one(await db.insert(protocols).values(fields).returning({ id: protocols.id })).id;
 }
 
 /**

@@ -2,7 +2,8 @@ import { and, asc, desc, eq, gt, isNull } from 'drizzle-orm';
 import { arms, massSets, rigLinks, rigRevisions, rigs } from '@/db/schema';
 import type { LinkSettings } from '@/shared/contracts/rigs';
 import type { RigDocument } from '@/shared/rig/document';
-import type { Handle } from './database';
+import type { Arm } from './arms';
+import { one, type Handle } from './database';
 
 export interface RigRecord {
   labId: string;
@@ -44,8 +45,7 @@ export async function findRig(db: Handle, labId: string, rigId: string): Promise
 /** Adds a rig with its first revision, its link and the mass set its document describes. Returns its id. */
 export function createRig(db: Handle, rig: { labId: string; name: string; document: RigDocument; link: LinkSettings; massSetLabel: string }, maker: Maker): Promise<string> {
   return db.transaction(async (tx) => {
-    const [row] = await tx.insert(rigs).values({ labId: rig.labId, name: rig.name, revision: 1, createdAt: maker.at }).returning({ id: rigs.id });
-    if (row === undefined) throw new Error('the new rig was not returned');
+    const row = one(await tx.insert(rigs).values({ labId: rig.labId, name: rig.name, revision: 1, createdAt: maker.at }).returning({ id: rigs.id }));
     const key = { labId: rig.labId, rigId: row.id };
     await tx.insert(rigRevisions).values({ ...key, number: 1, name: rig.name, document: rig.document, reason: 'first entry', madeAt: maker.at, madeById: maker.userId, madeBy: maker.name });
     await tx.insert(rigLinks).values({ ...key, settings: rig.link, changedAt: maker.at, changedBy: maker.name });
@@ -83,53 +83,10 @@ export async function changeRigLink(db: Handle, link: { labId: string; rigId: st
     .where(and(eq(rigLinks.labId, link.labId), eq(rigLinks.rigId, link.rigId)));
 }
 
-export interface ArmRecord {
-  id: string;
-  rigId: string;
-  name: string;
-  note: string;
-  fromAt: number;
-  untilAt: number;
-}
-
-const armColumns = { id: arms.id, rigId: arms.rigId, name: arms.name, note: arms.note, fromAt: arms.fromAt, untilAt: arms.untilAt };
-
-/** The arm that holds at `nowUtcMs`, or null. */
-export async function currentArm(db: Handle, rig: { labId: string; rigId: string }, nowUtcMs: number): Promise<ArmRecord | null> {
-  const [found] = await db
-    .select(armColumns)
-    .from(arms)
-    .where(and(eq(arms.labId, rig.labId), eq(arms.rigId, rig.rigId), isNull(arms.endedAt), gt(arms.untilAt, nowUtcMs)));
-  return found ?? null;
-}
-
-/** Arms that hold at `nowUtcMs` in a lab, by rig. */
-export async function currentArms(db: Handle, labId: string, nowUtcMs: number): Promise<Map<string, ArmRecord>> {
-  const found = await db.select(armColumns).from(arms).where(and(eq(arms.labId, labId), isNull(arms.endedAt), gt(arms.untilAt, nowUtcMs)));
+/** Arms of a lab that hold at `nowUtcMs`, by rig. */
+export async function currentArms(db: Handle, labId: string, nowUtcMs: number): Promise<Map<string, Arm>> {
+  const found = await db.select().from(arms).where(and(eq(arms.labId, labId), isNull(arms.endedAt), gt(arms.untilAt, nowUtcMs)));
   return new Map(found.map((arm) => [arm.rigId, arm]));
-}
-
-/** Arms a rig from now on; an arm that still stood ends. */
-export function armRig(db: Handle, arm: { labId: string; rigId: string; name: string; note: string; untilAt: number }, maker: Maker): Promise<ArmRecord> {
-  return db.transaction(async (tx) => {
-    await endArm(tx, arm, { at: maker.at, why: 'armed anew' });
-    const [row] = await tx
-      .insert(arms)
-      .values({ labId: arm.labId, rigId: arm.rigId, name: arm.name, note: arm.note, fromAt: maker.at, untilAt: arm.untilAt, armedById: maker.userId })
-      .returning(armColumns);
-    if (row === undefined) throw new Error('the new arm was not returned');
-    return row;
-  });
-}
-
-/** Ends the arm of a rig. Returns whether one stood. */
-export async function endArm(db: Handle, rig: { labId: string; rigId: string }, end: { at: number; why: string }): Promise<boolean> {
-  const ended = await db
-    .update(arms)
-    .set({ endedAt: end.at, endedWhy: end.why })
-    .where(and(eq(arms.labId, rig.labId), eq(arms.rigId, rig.rigId), isNull(arms.endedAt)))
-    .returning({ id: arms.id });
-  return ended.length > 0;
 }
 
 export interface MassSetRecord {

@@ -16,6 +16,8 @@ export const importMappingSchema = z.strictObject({
   timeFormat: z.enum(['iso', 'epoch-s', 'epoch-ms', 'elapsed-s']),
   /** The instant of elapsed time 0; needed for `elapsed-s` only. */
   elapsedFrom: instantSchema.optional(),
+  /** For `iso`: times that name no zone are UTC. Absent: such times are refused. */
+  timesWithoutZoneAreUtc: z.boolean().optional(),
   valueColumn: z.number().int().nonnegative(),
   unit: z.enum(['rad', 'mrad', 'urad', 'm', 'mm']),
 });
@@ -29,7 +31,7 @@ export const importPreviewSchema = z.strictObject({
   /** The first rows as read with the mapping's delimiter. */
   rows: z.array(z.array(z.string())),
   mapping: importMappingSchema,
-  /** What could not be guessed and must be stated. */
+  /** Keys of `mapping` that could not be told from the file and must be stated, for example `unit`. */
   ambiguous: z.array(z.string()),
 });
 export const importViewSchema = z.strictObject({

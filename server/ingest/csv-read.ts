@@ -1,0 +1,167 @@
+import { Readable } from 'node:stream';
+import { CsvError, parse } from 'csv-parse';
+import type { ImportMapping } from '@/shared/contracts/data';
+import type { SampleBatch } from '../interfaces/sample-store';
+import { readNumber, readTime, UnreadableField } from './csv-fields';
+
+export interface CsvProblem {
+  /** Line of the file, from 1; null for a problem of the whole file. */
+  row: number | null;
+  column: string | null;
+  message: string;
+}
+
+export interface CsvReading {
+  rows: number;
+  firstUtcMs: number | null;
+  lastUtcMs: number | null;
+  medianIntervalS: number | null;
+  /** The first 100. */
+  problems: CsvProblem[];
+  problemCount: number;
+}
+
+export interface CsvLimits {
+  /** Greatest distance of a value from the first one, in the mapping's unit: what the pendulum can turn from stop to stop. Null: not checked. */
+  greatestSpan: number | null;
+  /** Instants after this are refused, UTC ms. */
+  nowUtcMs: number;
+}
+
+const problemsKept = 100;
+const intervalsKept = 10_000;
+const batchSize = 10_000;
+const dayMs = 86_400_000;
+
+/**
+ * Reads a whole CSV as a stream: every problem by row and column, good rows to `take` in batches in their order.
+ * Memory stays flat whatever the size.
+ */
+export async function readCsv(chunks: AsyncIterable<Uint8Array>, options: { mapping: ImportMapping; limits: CsvLimits; take?: (batch: SampleBatch) => Promise<void> }): Promise<CsvReading> {
+  const reader = new RowReader(options.mapping, options.limits);
+  const parser = Readable.from(chunks).pipe(
+    parse({ bom: true, delimiter: options.mapping.delimiter, relax_column_count: true, relax_quotes: true, skip_empty_lines: true, comment: '#', comment_no_infix: true, trim: true, info: true, max_record_size: 1_000_000 }),
+  );
+  try {
+    for await (const item of parser) {
+      const { record, info } = item as { record: string[]; info: { lines: number } };
+      reader.row(record, info.lines);
+      if (reader.pending >= batchSize) await flush(reader, options.take);
+    }
+    await flush(reader, options.take);
+  } catch (error) {
+    if (!(error instanceof CsvError)) throw error;
+    reader.broken(error);
+  } finally {
+    parser.destroy();
+  }
+  return reader.result();
+}
+
+async function flush(reader: RowReader, take: ((batch: SampleBatch) => Promise<void>) | undefined): Promise<void> {
+  const batch = reader.batch();
+  if (take !== undefined && batch.utcMs.length > 0) await take(batch);
+}
+
+class RowReader {
+  private readonly utcMs = new Float64Array(batchSize);
+  private readonly value = new Float64Array(batchSize);
+  pending = 0;
+  private rows = 0;
+  private headerDone: boolean;
+  private names: string[] = [];
+  private first: { utcMs: number; value: number } | null = null;
+  private lastUtcMs: number | null = null;
+  private readonly intervalsMs: number[] = [];
+  private readonly problems: CsvProblem[] = [];
+  private problemCount = 0;
+
+  constructor(
+    private readonly mapping: ImportMapping,
+    private readonly limits: CsvLimits,
+  ) {
+    this.headerDone = !mapping.headerRow;
+  }
+
+  row(record: string[], line: number): void {
+    if (!this.headerDone) {
+      this.headerDone = true;
+      this.names = record;
+      const missing = [this.mapping.timeColumn, this.mapping.valueColumn].filter((index) => index >= record.length);
+      if (missing.length > 0) this.problem(line, null, `the mapping names column ${missing.map((index) => String(index + 1)).join(' and ')}, but the file has ${String(record.length)} columns: ${record.join(', ')}`);
+      return;
+    }
+    this.rows += 1;
+    const needed = Math.max(this.mapping.timeColumn, this.mapping.valueColumn) + 1;
+    if (record.length < needed) {
+      this.problem(line, null, `the row has ${String(record.length)} columns, the mapping needs ${String(needed)}`);
+      return;
+    }
+    const utcMs = this.field(line, this.mapping.timeColumn, () => this.time(record[this.mapping.timeColumn]));
+    const value = this.field(line, this.mapping.valueColumn, () => this.deflection(record[this.mapping.valueColumn]));
+    if (utcMs !== null) this.order(utcMs);
+    if (utcMs === null || value === null) return;
+    this.first ??= { utcMs, value };
+    this.utcMs[this.pending] = utcMs;
+    this.value[this.pending] = value;
+    this.pending += 1;
+  }
+
+  private time(field: string | undefined): number {
+    const utcMs = readTime(field, this.mapping);
+    const last = this.lastUtcMs;
+    if (utcMs > this.limits.nowUtcMs + dayMs) throw new UnreadableField(`the time ${iso(utcMs)} lies in the future: are time format and zone of the mapping right?`);
+    if (last !== null && utcMs === last) throw new UnreadableField(`the time ${iso(utcMs)} comes twice; each instant may have one value`);
+    if (last !== null && utcMs < last) throw new UnreadableField(`the time goes back from ${iso(last)} to ${iso(utcMs)}; rows must be in order of time`);
+    return utcMs;
+  }
+
+  private deflection(field: string | undefined): number {
+    const value = readNumber(field, this.mapping.decimal, 'value');
+    const { greatestSpan } = this.limits;
+    if (greatestSpan !== null && this.first !== null && Math.abs(value - this.first.value) > greatestSpan)
+      throw new UnreadableField(`the value ${String(value)} ${this.mapping.unit} lies ${String(Number(Math.abs(value - this.first.value).toPrecision(3)))} ${this.mapping.unit} from the first one, and the pendulum can move ${String(Number(greatestSpan.toPrecision(3)))} ${this.mapping.unit} at most: is the unit right?`);
+    return value;
+  }
+
+  private field(line: number, index: number, read: () => number): number | null {
+    try {
+      return read();
+    } catch (error) {
+      if (!(error instanceof UnreadableField)) throw error;
+      this.problem(line, this.names[index]?.trim() || `column ${String(index + 1)}`, error.message);
+      return null;
+    }
+  }
+
+  private order(utcMs: number): void {
+    if (this.lastUtcMs !== null && this.intervalsMs.length < intervalsKept) this.intervalsMs.push(utcMs - this.lastUtcMs);
+    this.lastUtcMs = utcMs;
+  }
+
+  private problem(row: number | null, column: string | null, message: string): void {
+    this.problemCount += 1;
+    if (this.problems.length < problemsKept) this.problems.push({ row, column, message });
+  }
+
+  broken(error: CsvError): void {
+    const line = typeof error.lines === 'number' ? error.lines : null;
+    const message = error.code === 'CSV_QUOTE_NOT_CLOSED' ? 'a quotation mark is opened and never closed' : error.code === 'CSV_MAX_RECORD_SIZE' ? 'a row is longer than a million characters: is the delimiter right?' : 'the row cannot be parted into columns';
+    this.problem(line, null, message);
+  }
+
+  batch(): SampleBatch {
+    const batch = { utcMs: this.utcMs.slice(0, this.pending), value: this.value.slice(0, this.pending) };
+    this.pending = 0;
+    return batch;
+  }
+
+  result(): CsvReading {
+    if (this.rows === 0) this.problem(null, null, 'there is no row of data in the file');
+    const sorted = [...this.intervalsMs].sort((a, b) => a - b);
+    const median = sorted[Math.floor(sorted.length / 2)];
+    return { rows: this.rows, firstUtcMs: this.first?.utcMs ?? null, lastUtcMs: this.lastUtcMs, medianIntervalS: median === undefined ? null : median / 1000, problems: this.problems, problemCount: this.problemCount };
+  }
+}
+
+const iso = (utcMs: number) => new Date(utcMs).toISOString();

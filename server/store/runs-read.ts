@@ -1,0 +1,128 @@
+import { and, asc, desc, eq, gt, isNull, lt, notInArray, or } from 'drizzle-orm';
+import { channels, runEvents, runs, runSteps } from '@/db/schema';
+import { isKey, timestampOfUtcMs } from '@/db/schema/columns';
+import type { ChainedEvent, StepRow } from '@/shared/archive/run-records';
+import type { RunState } from '@/shared/contracts/runs';
+import type { ChannelRecord } from './imports';
+import type { Connection, Handle } from './database';
+
+const summaryColumns = {
+  labId: runs.labId, id: runs.id, rigId: runs.rigId, rigRevision: runs.rigRevision, protocolId: runs.protocolId, massSetId: runs.massSetId, rehearsal: runs.rehearsal, rigName: runs.rigName,
+  protocolName: runs.protocolName, protocolRevision: runs.protocolRevision, massSetLabel: runs.massSetLabel, operator: runs.operator, lastSeq: runs.lastSeq, state: runs.state,
+  outcome: runs.outcome, failure: runs.failure, createdAt: runs.createdAt, startedAt: runs.startedAt, endedAt: runs.endedAt, predictedEndAt: runs.predictedEndAt,
+};
+
+/** What lists show of a run. */
+export type RunListRow = Omit<RunRecord, 'start' | 'snapshot' | 'chartVersion' | 'lastHash'>;
+export type RunRecord = typeof runs.$inferSelect;
+
+const endedStates: RunState[] = ['finished', 'stopped', 'failed'];
+
+export interface RunListQuery {
+  labId: string;
+  rigId?: string | undefined;
+  activeOnly: boolean;
+  /** Rows after this one in the order of the list. */
+  after: { createdAt: number; id: string } | null;
+  limit: number;
+}
+
+/** Runs and rehearsals, newest first. */
+export function listRuns(db: Handle, query: RunListQuery): Promise<RunListRow[]> {
+  const { after } = query;
+  return db
+    .select(summaryColumns)
+    .from(runs)
+    .where(
+      and(
+        eq(runs.labId, query.labId),
+        query.rigId === undefined ? undefined : eq(runs.rigId, query.rigId),
+        query.activeOnly ? notInArray(runs.state, endedStates) : undefined,
+        after === null ? undefined : or(lt(runs.createdAt, after.createdAt), and(eq(runs.createdAt, after.createdAt), lt(runs.id, after.id))),
+      ),
+    )
+    .orderBy(desc(runs.createdAt), desc(runs.id))
+    .limit(query.limit);
+}
+
+export async function findRun(db: Handle, labId: string, runId: string): Promise<RunRecord | null> {
+  const [found] = await db.select().from(runs).where(and(eq(runs.labId, labId), eq(runs.id, runId)));
+  return found ?? null;
+}
+
+/** The run of each rig that has not ended, by rig. Rehearsals are no runs of the rig. */
+export async function activeRuns(db: Handle, labId: string): Promise<Map<string, RunListRow>> {
+  const rows = await db.select(summaryColumns).from(runs).where(and(eq(runs.labId, labId), eq(runs.rehearsal, false), notInArray(runs.state, endedStates)));
+  return new Map(rows.map((row) => [row.rigId, row]));
+}
+
+/** The step log of a run in order. */
+export async function readSteps(db: Handle, labId: string, runId: string): Promise<StepRow[]> {
+  const rows = await db.select().from(runSteps).where(and(eq(runSteps.labId, labId), eq(runSteps.runId, runId))).orderBy(asc(runSteps.seq));
+  return rows.map(({ labId: _lab, runId: _run, ...step }) => step);
+}
+
+/** Events of a run after `afterSeq`, oldest first. */
+export async function readEvents(db: Handle, run: { labId: string; runId: string }, page: { afterSeq: number; limit?: number }): Promise<ChainedEvent[]> {
+  const rows = await db
+    .select()
+    .from(runEvents)
+    .where(and(eq(runEvents.labId, run.labId), eq(runEvents.runId, run.runId), gt(runEvents.seq, page.afterSeq)))
+    .orderBy(asc(runEvents.seq))
+    .limit(page.limit ?? 1_000_000);
+  return rows.map(({ labId: _lab, runId: _run, ...event }) => event);
+}
+
+/** Channels whose samples belong to a run: its own, and for a run on the rig those of the rig. */
+export function channelsOfRun(db: Handle, run: { labId: string; id: string; rigId: string; rehearsal: boolean }): Promise<ChannelRecord[]> {
+  const own = eq(channels.runId, run.id);
+  const ofRig = and(eq(channels.rigId, run.rigId), isNull(channels.runId));
+  return db.select().from(channels).where(and(eq(channels.labId, run.labId), run.rehearsal ? own : or(own, ofRig))).orderBy(asc(channels.createdAt), asc(channels.name));
+}
+
+export interface SampleWindow {
+  labId: string;
+  channelId: string;
+  fromUtcMs: number;
+  toUtcMs: number;
+}
+
+/** How many samples a channel has within a window. */
+export async function countSamples(connection: Connection, window: SampleWindow): Promise<number> {
+  if (!isKey(window.labId) || !isKey(window.channelId)) return 0;
+  const result = await connection.pool.query<{ total: string }>('select count(*) as total from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4', windowParameters(window));
+  return Number(result.rows[0]?.total ?? 0);
+}
+
+const windowParameters = (window: SampleWindow) => [window.labId, window.channelId, timestampOfUtcMs(window.fromUtcMs), timestampOfUtcMs(window.toUtcMs)];
+
+/**
+ * The least and the greatest sample of each of `intervals` equal parts of a window, in order of time: what a plot of
+ * that many pixel columns can show, peaks included.
+ */
+export async function extremesOf(connection: Connection, window: SampleWindow, intervals: number): Promise<{ utcMs: number[]; value: number[] }> {
+  const result = await connection.pool.query<{ ms: number; value: number }>(
+    `with part as materialized (
+       select at, value, least($5::int - 1, floor(extract(epoch from at - $3::timestamptz) / nullif(extract(epoch from $4::timestamptz - $3::timestamptz), 0) * $5)::int) as number
+       from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4),
+     bound as (select number, min(value) as low, max(value) as high from part group by number)
+     select (extract(epoch from min(part.at)) * 1000)::double precision as ms, part.value
+     from part join bound on bound.number is not distinct from part.number
+     where part.value = bound.low or part.value = bound.high
+     group by part.number, part.value order by 1`,
+    [...windowParameters(window), intervals],
+  );
+  return { utcMs: result.rows.map((row) => row.ms), value: result.rows.map((row) => row.value) };
+}
+
+/** The last instant at which a channel has a sample, or null. */
+export async function lastSampleUtcMs(connection: Connection, channel: { labId: string; channelId: string }): Promise<number | null> {
+  const result = await connection.pool.query<{ ms: number | null }>('select (extract(epoch from max(at)) * 1000)::double precision as ms from samples where lab_id = $1 and channel_id = $2', [channel.labId, channel.channelId]);
+  return result.rows[0]?.ms ?? null;
+}
+
+/** Labs with a run that has not ended. */
+export async function labsWithActiveRuns(db: Handle): Promise<string[]> {
+  const rows = await db.selectDistinct({ labId: runs.labId }).from(runs).where(and(eq(runs.rehearsal, false), notInArray(runs.state, endedStates)));
+  return rows.map((row) => row.labId);
+}
