@@ -1,6 +1,6 @@
-import canonicalize from 'canonicalize';
 import { and, desc, eq, lt, sql } from 'drizzle-orm';
 import { audit } from '@/db/schema';
+import { appendEvent, emptyChain, type Sha256 } from '@/shared/archive/chain';
 import type { Handle, Transaction } from './database';
 
 /** Who did it: an account, or the server itself. */
@@ -22,21 +22,17 @@ export interface AuditFact {
 
 export type AuditRow = typeof audit.$inferSelect;
 
-const firstPrev = '0'.repeat(64);
-
 /**
  * Adds an entry to the lab's audit chain, in the transaction of the act itself: an act that cannot be audited does not
  * happen. Entries are numbered without gaps, for an advisory lock lets one writer of a lab at a time to the chain's end.
- * @param sha256 hex SHA-256 of UTF-8 text
  */
-export async function appendAudit(tx: Transaction, fact: AuditFact, sha256: (text: string) => string): Promise<void> {
+export async function appendAudit(tx: Transaction, fact: AuditFact, sha256: Sha256): Promise<void> {
   const { labId } = fact;
   await tx.execute(sql`select pg_advisory_xact_lock(hashtextextended(${`audit ${labId}`}, 0))`);
   const [last] = await tx.select({ seq: audit.seq, hash: audit.hash }).from(audit).where(eq(audit.labId, labId)).orderBy(desc(audit.seq)).limit(1);
   // Through JSON once, so that what is hashed is what the column gives back.
   const data = JSON.parse(JSON.stringify({ ...fact.data, who: fact.who })) as Record<string, unknown>;
-  const link = { seq: (last?.seq ?? 0) + 1, at: new Date(fact.utcMs).toISOString(), kind: fact.kind, data, prev: last?.hash ?? firstPrev };
-  await tx.insert(audit).values({ labId, ...link, hash: sha256(canonicalize(link) ?? '') });
+  await tx.insert(audit).values({ labId, ...appendEvent(last ?? emptyChain, { at: new Date(fact.utcMs).toISOString(), kind: fact.kind, data }, sha256) });
 }
 
 /** Entries of a lab, newest first, from before `beforeSeq` on. */

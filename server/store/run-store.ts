@@ -1,5 +1,6 @@
 import { and, asc, eq, notInArray, sql } from 'drizzle-orm';
 import { runEvents, runs, runSteps } from '@/db/schema';
+import type { ChainHead } from '@/shared/archive/chain';
 import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
 import type { RunState } from '@/shared/contracts/runs';
 import { StaleRunError, type RunStore, type RunWrite, type StoredRun } from '../interfaces/run-store';
@@ -79,7 +80,7 @@ async function commit(tx: Transaction, write: RunWrite): Promise<void> {
 }
 
 /** The end of the chain after `events`; a gap or a wrong `prev` is refused before anything is written. */
-function followChain(from: { seq: number; hash: string }, events: readonly ChainedEvent[]): { seq: number; hash: string } {
+function followChain(from: ChainHead, events: readonly ChainedEvent[]): ChainHead {
   let end = from;
   for (const event of events) {
     if (event.seq !== end.seq + 1 || event.prev !== end.hash) throw new Error(`event ${event.seq} does not continue the chain, which ends at ${end.seq}`);
