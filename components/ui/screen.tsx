@@ -20,7 +20,7 @@ interface ScreenProps {
   testID?: string;
 }
 
-const gutter = 'mx-auto w-full max-w-[920px] px-4 wide:px-7';
+const gutter = 'w-full max-w-[960px] px-4 wide:px-7';
 
 /** The frame of every screen: one heading of level 1, scrolled content, acts at the bottom, a right pane when wide. */
 export function Screen({ title, back, trailing, children, footer, aside, asideOnlyWide = false, testID }: ScreenProps) {

@@ -1,9 +1,5 @@
-import { Empty, Screen } from '@/components/ui';
+import { LabScreen } from '@/components/lab/lab-screen';
 
 export default function Lab() {
-  return (
-    <Screen title="Lab">
-      <Empty title="Nothing here yet" />
-    </Screen>
-  );
+  return <LabScreen />;
 }

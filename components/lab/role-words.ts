@@ -1,0 +1,30 @@
+import { acts, roles, type Act, type Role } from '@/shared/contracts/roles';
+
+/** The acts of the role matrix as a member of the lab would say them. */
+export const actWords: Record<Act, string> = {
+  'members.manage': 'Manage members and invitations',
+  'lab.settings': 'Change the settings of the lab',
+  'rig.edit': 'Change a rig, its link and its mass sets',
+  'rig.arm': 'Arm a rig on site',
+  'protocol.write': 'Write and issue protocols, rehearse',
+  'run.start': 'Start a run',
+  'run.resume': 'Resume a run',
+  'run.hold': 'Hold a run',
+  'run.stop': 'Stop a run',
+  'data.import': 'Import data',
+  evaluate: 'Evaluate a run',
+  read: 'Read everything',
+};
+
+export const roleOptions = roles.map((role) => ({ value: role, label: `${role[0]?.toUpperCase() ?? ''}${role.slice(1)}` }));
+
+export const roleSummary: Record<Role, string> = {
+  owner: 'everything, members and settings included',
+  keeper: 'rigs, protocols, runs and data',
+  operator: 'protocols, arming, runs and data',
+  analyst: 'data and evaluation; hold and stop',
+  viewer: 'reads; hold and stop',
+};
+
+/** The matrix as rows for a table: act in words, and for each role whether it may. */
+export const matrixRows = (Object.keys(acts) as Act[]).map((act) => ({ act, words: actWords[act], allowed: roles.map((role) => (acts[act] as readonly Role[]).includes(role)) }));
