@@ -7,6 +7,9 @@ import { type Finding, withoutRepeats } from './finding';
 import { locateJsonError } from './json-position';
 import { notYet } from './support';
 
+/** Characters; a protocol of 10,000 steps written out one by one stays below. */
+const greatestTextLength = 2_000_000;
+
 /**
  * Everything for which a protocol is refused on this rig: when a revision is issued, started, planned or rehearsed. Takes anything,
  * half-typed documents too, and never throws. An empty list means that the protocol can be carried out.
@@ -31,6 +34,9 @@ export function checkDocumentText(text: string): { document: ProtocolDocument | 
 
 /** Parses JSON (a byte order mark is passed over); what is no JSON gives a finding with line and column instead of an exception. */
 export function parseJson(text: string): { value: unknown } | { finding: Finding } {
+  if (text.length > greatestTextLength) {
+    return { finding: { code: 'too-large', path: null, message: `The text has ${text.length} characters. At most ${greatestTextLength} are read.` } };
+  }
   const plain = text.startsWith('\uFEFF') ? text.slice(1) : text;
   const error = locateJsonError(plain);
   if (error !== null) return { finding: { code: 'not-json', path: null, message: `Line ${error.line}, column ${error.column}: ${error.message}` } };

@@ -1,0 +1,148 @@
+import type { RigDocument } from '../rig/document';
+import type { ProtocolDocument, Step } from './document';
+import { swingMove, UnplayableStep } from './durations';
+import { pathObstacles } from './motion-path';
+
+export interface Template {
+  id: string;
+  name: string;
+  /** What it is for, in a sentence or two. */
+  summary: string;
+  /** The document for a rig, with lengths in periods of its pendulum. Steps that this version does not carry out are left out. */
+  make(rig: RigDocument): ProtocolDocument;
+  /** The rig it is meant for when it is planned or rehearsed from the command line: the empty control takes the spheres off. */
+  rigFor(rig: RigDocument): RigDocument;
+}
+
+const swing = (to: string | number): Step => ({ kind: 'swing', to: typeof to === 'string' ? to : { angle_deg: to } });
+
+/** From swing to swing two whole periods, so that no swing adds to the ringing of the one before. */
+const beat: Step = { kind: 'dwell', beat_periods: 2 };
+const reversal = (to: string | number): Step[] => [swing(to), beat];
+const pair: Step[] = [...reversal('far'), ...reversal('near')];
+
+function document(name: string, parts: Pick<ProtocolDocument, 'notes' | 'steps'> & Partial<ProtocolDocument>): ProtocolDocument {
+  return {
+    formatVersion: 1,
+    name,
+    onInterruption: 'hold',
+    evaluation: { method: 'equilibrium', drift: 'aba', channel: 'deflection' },
+    ...parts,
+  };
+}
+
+const atClear = (rig: RigDocument): Partial<ProtocolDocument> => (rig.stations['clear'] === undefined ? {} : { atEnd: { station: 'clear', drivers: 'keep' } });
+
+const asItIs = (rig: RigDocument): RigDocument => rig;
+
+/** The same rig with the sources taken off; what else turns along stays. */
+export function withoutSources(rig: RigDocument): RigDocument {
+  return { ...rig, sources: { ...rig.sources, shape: 'none' } };
+}
+
+const overnight = (rig: RigDocument, name: string, notes: string): ProtocolDocument =>
+  document(name, { notes, ...atClear(rig), steps: [{ kind: 'home' }, swing('near'), ...pair, { kind: 'repeat', times: 16, steps: pair }] });
+
+const nearFar: Template = {
+  id: 'near-far',
+  name: 'Overnight reversals',
+  summary: 'The standard night: after a first pair, 16 pairs of a far and a near dwell at a beat of two periods, then the sources turn clear.',
+  make: (rig) => overnight(rig, 'Overnight reversals', ''),
+  rigFor: asItIs,
+};
+
+const proof: Template = {
+  id: 'proof',
+  name: 'Proof hour',
+  summary: 'Three reversals after any change to the rig and before a campaign: sign, size and period of the signal show whether it works.',
+  make: () => document('Proof hour', { notes: '', steps: [{ kind: 'home' }, swing('near'), ...reversal('far'), ...reversal('near'), ...reversal('far')] }),
+  rigFor: asItIs,
+};
+
+const scan: Template = {
+  id: 'scan',
+  name: 'Torque scan',
+  summary: 'Dwells at a row of angles, up and down again: where the torque is zero and where it is greatest. For a new rig, or when the table was moved.',
+  make: (rig) => {
+    const up = scanAngles(rig);
+    return document('Torque scan', { notes: '', steps: [{ kind: 'home' }, ...[...up, ...up.slice(0, -1).reverse()].flatMap(reversal)] });
+  },
+  rigFor: asItIs,
+};
+
+const wideScan = [-70, -45, -30, -20, -10, 0, 10, 20, 30, 45, 70];
+const closeScan = [33, 40, 50, 65, 90, 115, 130, 140, 147];
+
+/** Angles that can be reached from the home position and from each other, ascending, deg. */
+function scanAngles(rig: RigDocument): number[] {
+  const motion = rig.motion;
+  if (motion === undefined) return wideScan;
+  const reachable = (angles: number[]) => angles.filter((angleDeg) => pathObstacles(motion, motion.homeDeg, angleDeg).length === 0);
+  const wide = reachable(wideScan);
+  const close = reachable(closeScan);
+  return close.length > wide.length ? close : wide;
+}
+
+const still: Template = {
+  id: 'still',
+  name: 'Still night',
+  summary: 'An hour to settle and 32 dwells of two periods without any motion: the noise and the drift of the rig in this room, before the first measurement of G.',
+  make: () =>
+    document('Still night', {
+      notes: '',
+      steps: [{ kind: 'home' }, swing('near'), { kind: 'settle', for_s: 3600 }, { kind: 'repeat', times: 32, steps: [{ kind: 'dwell', periods: 2 }] }],
+    }),
+  rigFor: asItIs,
+};
+
+const fourStation: Template = {
+  id: 'four-station',
+  name: 'Four stations, weekend',
+  summary: 'Near and far, then both turned by 180°, 23 times: tilt, magnetism and unequal balls change sign with the turn, gravity does not. For a rig that turns freely.',
+  make: (rig) => {
+    const turn = (from: string, to: string): Step[] => [swing(to), { kind: 'settle', for_s: restOfBeatS(rig, from, to) }];
+    const back: Step[] = [...reversal('farBack'), ...reversal('nearBack')];
+    const block: Step[] = [...pair, ...pair, ...turn('near', 'nearBack'), ...back, ...back, ...turn('nearBack', 'near')];
+    return document('Four stations, weekend', { notes: '', ...atClear(rig), steps: [{ kind: 'home' }, swing('near'), ...pair, { kind: 'repeat', times: 23, steps: block }] });
+  },
+  rigFor: asItIs,
+};
+
+/** What a turn from station to station leaves of a beat of two periods, s; a turn that cannot be planned counts as none. */
+function restOfBeatS(rig: RigDocument, from: string, to: string): number {
+  const beatS = 2 * (rig.measured?.period_s?.value ?? 420);
+  try {
+    const { durationS } = swingMove({ to }, rig, rig.stations[from]?.value ?? 0);
+    return Math.max(1, Math.round((beatS - durationS) * 1000) / 1000);
+  } catch (error) {
+    if (error instanceof UnplayableStep) return beatS;
+    throw error;
+  }
+}
+
+const nearFarShort: Template = {
+  id: 'near-far-short',
+  name: 'Short reversals',
+  summary: 'Six pairs of a far and a near dwell at a beat of two periods: a first value of G in under three hours, for demonstrations and rehearsals.',
+  make: () => document('Short reversals', { notes: '', steps: [{ kind: 'home' }, swing('near'), { kind: 'repeat', times: 6, steps: pair }] }),
+  rigFor: asItIs,
+};
+
+const emptyControl: Template = {
+  id: 'empty-control',
+  name: 'Empty control',
+  summary: 'The overnight reversals with nothing on the turntable: what remains of near minus far is not gravity of the sources.',
+  make: (rig) => overnight(rig, 'Empty control', 'Run this with the mass set "empty": the same steps as the overnight reversals, without the source masses.'),
+  rigFor: withoutSources,
+};
+
+/** The built-in templates, in the order in which they are offered. */
+export const templates: readonly Template[] = [nearFar, nearFarShort, proof, scan, still, fourStation, emptyControl];
+
+/** Built-in templates of the format that make no sense without steps this version does not carry out yet. */
+export const templatesNotYet: readonly string[] = ['shaped', 'afternoon', 'time-of-swing'];
+
+/** The template with this id; undefined where there is none. */
+export function templateById(id: string): Template | undefined {
+  return templates.find((template) => template.id === id);
+}
