@@ -14,17 +14,18 @@ interface DrawingProps {
 /** The picture of a strip. Colour never stands alone: lane, mark and line style say the same. */
 export const StripDrawing = memo(function StripDrawing({ layout, widthPx, heightPx, mini }: DrawingProps) {
   const { colors } = useTheme();
-  const line = mini ? 1.3 : 1.9;
+  const line = mini ? 1.3 : layout.dense ? 1.4 : 1.9;
+  const future = layout.onlyPlanned ? 1 : 0.38;
   return (
     <Svg width={widthPx} height={heightPx} viewBox={`0 0 ${widthPx} ${heightPx}`} aria-hidden>
       {mini ? null : layout.swings.map((swing) => <SwingLine key={swing.key} swing={swing} colors={colors} />)}
       {layout.equilibria.map(({ x1, x2, y, planned }) => (
         <Line key={`${x1} ${y}`} x1={x1} x2={x2} y1={y} y2={y} stroke={colors.dim} strokeWidth={1} strokeDasharray="2 4" opacity={planned ? 0.6 : 0.95} />
       ))}
-      <Path d={pathOf(layout.predicted)} stroke={colors.text} strokeWidth={line * 0.85} fill="none" opacity={0.38} strokeLinejoin="round" />
+      <Path d={pathOf(layout.predicted)} stroke={colors.text} strokeWidth={layout.onlyPlanned ? line : line * 0.85} fill="none" opacity={future} strokeLinejoin="round" />
       <Path d={pathOf(layout.measured)} stroke={colors.text} strokeWidth={line} fill="none" strokeLinejoin="round" strokeLinecap="round" />
       {layout.blocks.map((block) => (
-        <Block key={block.key} block={block} colors={colors} mini={mini} />
+        <Block key={block.key} block={block} colors={colors} mini={mini} faded={block.phase === 'planned' && !layout.onlyPlanned} />
       ))}
       {layout.nowX === null ? null : (
         <G>
@@ -42,15 +43,21 @@ function SwingLine({ swing, colors }: { swing: StripSwing; colors: ThemeColors }
   return <Line x1={x1} y1={y1} x2={x2} y2={y2} stroke={stroke} strokeWidth={selected ? 3 : 1} opacity={planned && !selected ? 0.35 : 0.7} strokeLinecap="round" />;
 }
 
-function Block({ block, colors, mini }: { block: StripBlock; colors: ThemeColors; mini: boolean }) {
-  const { x, y, width, height, lane, bad, cutShort, phase, selected } = block;
+interface BlockProps {
+  block: StripBlock;
+  colors: ThemeColors;
+  mini: boolean;
+  faded: boolean;
+}
+
+function Block({ block, colors, mini, faded }: BlockProps) {
+  const { x, y, width, height, lane, bad, cutShort, selected } = block;
   const color = lane === 'near' ? colors.near : lane === 'far' ? colors.far : colors.faint;
   const radius = Math.min(mini ? 1.5 : 3, width / 2, height / 2);
   const hollow = bad || cutShort || (!block.measured && lane !== 'other');
-  const opacity = phase === 'planned' ? 0.45 : 1;
   return (
     <G>
-      <G opacity={opacity}>
+      <G opacity={faded ? 0.45 : 1}>
         <Rect
           x={hollow ? x + 0.75 : x} y={hollow ? y + 0.75 : y} width={Math.max(0.5, hollow ? width - 1.5 : width)} height={hollow ? height - 1.5 : height} rx={radius}
           fill={color} fillOpacity={hollow ? 0.22 : 1} stroke={hollow ? color : 'none'} strokeWidth={hollow ? 1.5 : 0} strokeDasharray={cutShort ? '3 2' : undefined}
@@ -58,7 +65,7 @@ function Block({ block, colors, mini }: { block: StripBlock; colors: ThemeColors
         {bad && !mini && width >= 8 ? <Path d={crossOf(block)} stroke={colors.danger} strokeWidth={2} strokeLinecap="round" /> : null}
         {block.marked && !bad ? <Path d={markOf(block)} fill={hollow ? color : colors.ink} /> : null}
       </G>
-      {selected ? <Rect x={x - 1.5} y={y - 1.5} width={width + 3} height={height + 3} rx={radius + 1.5} fill="none" stroke={colors.lamp} strokeWidth={2.5} /> : null}
+      {selected ? <Rect x={x + 1} y={y + 1} width={Math.max(1, width - 2)} height={Math.max(1, height - 2)} rx={radius} fill="none" stroke={colors.text} strokeWidth={2.5} /> : null}
     </G>
   );
 }

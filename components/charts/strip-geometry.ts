@@ -60,6 +60,10 @@ export interface StripLayout {
   nowX: number | null;
   /** The newest measured point, at the now-line. */
   nowDot: { x: number; y: number } | null;
+  /** Nothing has happened yet: the plan is the whole picture and is drawn in full strength. */
+  onlyPlanned: boolean;
+  /** So many stands that lines must be thinner. */
+  dense: boolean;
   /** Deflection at the top and the bottom of the curve's room; null without any curve. */
   rangeRad: [number, number] | null;
   xToPx: (utcMs: number) => number;
@@ -69,7 +73,7 @@ export interface StripLayout {
 
 /** Least width of a block in pixels, so that a short dwell in a long night stays to be seen. */
 const MIN_BLOCK_PX = 1.5;
-const MARK_ROOM_PX = 11;
+const MARK_ROOM_PX = 7;
 
 /** From the first step's start to the last one's end. */
 export function wholeWindow(steps: readonly StripStep[]): StripWindow {
@@ -184,8 +188,11 @@ export function layoutStrip(input: StripInput): StripLayout {
   const now = input.nowUtcMs ?? null;
   const nowX = now !== null && now >= window.fromUtcMs && now <= window.toUtcMs ? xToPx(now) : null;
   const measured = curve(input.measured, window.fromUtcMs, window.toUtcMs);
+  const blocks = blocksOf(input, xToPx);
   return {
-    blocks: blocksOf(input, xToPx),
+    onlyPlanned: now === null && input.steps.every((step) => step.phase === 'planned'),
+    dense: blocks.length > 0 && widthPx / blocks.length < 18,
+    blocks,
     swings: swingsOf(input, xToPx),
     measured,
     predicted: curve(input.predicted, window.fromUtcMs, window.toUtcMs),

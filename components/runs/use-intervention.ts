@@ -1,0 +1,94 @@
+import { useReducer, useRef } from 'react';
+import { ApiProblem, call, deviceNowMs, newIdempotencyKey, serverNowIso, serverNowMs } from '@/components/api';
+import { holdAfterDwell, holdRun, resumeRun, stopRun } from '@/shared/contracts/runs';
+import { interventionReducer, type LocalIntervention, type SafeAct } from './intervention';
+import { sendUntilAnswered, type Attempt, type Sending } from './send-until-answered';
+
+interface RunAddress {
+  labId: string;
+  runId: string;
+}
+
+const routes = { hold: holdRun, 'hold-after-dwell': holdAfterDwell, stop: stopRun } as const;
+/** Answers that say nothing about this act: the server is overloaded, at work on an earlier attempt, or its database is away. */
+const inconclusive: ReadonlySet<string> = new Set(['still-running', 'database-away', 'too-many-requests', 'internal']);
+
+type Outcome = { kind: 'accepted'; serverAtMs: number } | { kind: 'refused'; detail: string };
+
+interface Request extends RunAddress {
+  act: SafeAct;
+  key: string;
+  tappedAt: string;
+}
+
+async function sendOnce({ labId, runId, act, key, tappedAt }: Request, signal: AbortSignal): Promise<Attempt<Outcome>> {
+  try {
+    const { data } = await call(routes[act], { params: { labId, runId }, body: { tappedAt }, idempotencyKey: key, keepalive: true, signal });
+    return { kind: 'answer', value: { kind: 'accepted', serverAtMs: Date.parse(data.serverAt) } };
+  } catch (error) {
+    if (error instanceof ApiProblem && !inconclusive.has(error.code)) return { kind: 'answer', value: { kind: 'refused', detail: error.detail } };
+    return { kind: 'none' };
+  }
+}
+
+/**
+ * Hold, hold after this dwell and stop: one tap, sent until answered, acted on at most once. Leaving the screen does not
+ * take it back: what was tapped goes on being sent.
+ */
+export function useIntervention({ labId, runId }: RunAddress): { local: LocalIntervention; tap: (act: SafeAct) => void } {
+  const [local, dispatch] = useReducer(interventionReducer, { kind: 'idle' });
+  const running = useRef<{ act: SafeAct; sending: Sending<Outcome> } | null>(null);
+  const tap = (act: SafeAct) => {
+    if (running.current?.act === act) {
+      running.current.sending.again();
+      return;
+    }
+    if (running.current?.act === 'stop') return;
+    running.current?.sending.cancel();
+    const key = newIdempotencyKey();
+    const request = { labId, runId, act, key, tappedAt: serverNowIso() };
+    dispatch({ kind: 'tapped', act, atMs: serverNowMs() });
+    const sending = sendUntilAnswered<Outcome>({
+      send: (signal) => sendOnce(request, signal),
+      onAttempt: () => dispatch({ kind: 'attempt' }),
+      onNoAnswer: () => dispatch({ kind: 'no-answer' }),
+    });
+    running.current = { act, sending };
+    void sending.answer.then((outcome) => {
+      if (running.current?.sending !== sending) return;
+      running.current = null;
+      dispatch(outcome ?? { kind: 'gave-up' });
+    });
+  };
+  return { local, tap };
+}
+
+/** A resume counts for 5 s after the tap: whoever tapped must still be looking. */
+export const resumeExpiresMs = 5000;
+
+/**
+ * Resumes once. It is never sent again by itself and never waits for a connection.
+ * @throws ApiProblem when refused; ApiUnreachable or an abort when there was no answer in 5 s.
+ */
+export async function resumeOnce({ labId, runId }: RunAddress): Promise<{ serverAt: string }> {
+  const abort = new AbortController();
+  const startedMs = deviceNowMs();
+  const timer = setTimeout(() => abort.abort(), resumeExpiresMs);
+  try {
+    const { data } = await call(resumeRun, { params: { labId, runId }, body: { tappedAt: serverNowIso() }, signal: abort.signal });
+    return data;
+  } catch (error) {
+    if (deviceNowMs() - startedMs >= resumeExpiresMs) throw new ResumeExpired();
+    throw error;
+  } finally {
+    clearTimeout(timer);
+  }
+}
+
+/** No answer within the 5 s for which a resume counts. */
+export class ResumeExpired extends Error {
+  constructor() {
+    super('There was no answer in 5 s, so this resume has expired and was not sent again. Look at the state above before you try once more.');
+    this.name = 'ResumeExpired';
+  }
+}
