@@ -1,9 +1,12 @@
 export { Button, IconButton, type ButtonKind, type ButtonProps } from './button';
 export { Chip } from './chip';
 export { Field, FieldFrame, Select, type FieldProps } from './field';
+export { FileButton } from './file-button';
 export { FormField, showProblem } from './form-field';
 export { Icon, type IconName } from './icon';
+export { PressAndKeep } from './press-and-keep';
 export { Panel, Row, Section } from './panel';
+export { fileNameOf, saveTextFile } from './save-file';
 export { Screen } from './screen';
 export { Sheet } from './sheet';
 export { Empty, Loading, Offline, ProblemNotice } from './states';

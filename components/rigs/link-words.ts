@@ -1,0 +1,30 @@
+import { serverNowMs } from '@/components/api';
+import type { Tone } from '@/components/ui';
+import type { LinkSettings, RigLive } from '@/shared/contracts/rigs';
+import { formatAgo } from '@/shared/lib/format-duration';
+
+export interface LinkState {
+  words: string;
+  tone: Tone;
+}
+
+const ageS = (live: RigLive): number | null => (live.lastReplyAt === null ? null : Math.max(0, (serverNowMs() - Date.parse(live.lastReplyAt)) / 1000));
+
+/** The link in two words for a chip; the age is that of the controller's last valid reply. */
+export function linkState(live: RigLive): LinkState {
+  const age = ageS(live);
+  switch (live.condition) {
+    case 'ready':
+      return age !== null && age > 5 ? { words: `last reply ${formatAgo(age)}`, tone: 'lamp' } : { words: 'live', tone: 'good' };
+    case 'opening':
+      return { words: 'opening', tone: 'lamp' };
+    case 'lost':
+      return { words: age === null ? 'link lost' : `lost, last reply ${formatAgo(age)}`, tone: 'danger' };
+    case 'refused':
+      return { words: 'refused', tone: 'danger' };
+    case 'closed':
+      return { words: 'link closed', tone: 'dim' };
+  }
+}
+
+export const linkName = (link: LinkSettings): string => (link.kind === 'simulated' ? 'Simulated controller' : `${link.path}, ${link.baudRate} baud`);
