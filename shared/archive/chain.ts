@@ -41,10 +41,17 @@ export function verifyChain(events: Iterable<ChainedEvent>, sha256: Sha256): Cha
   let head = emptyChain;
   for (const event of events) {
     const expectedSeq = head.seq + 1;
-    if (event.seq !== expectedSeq) return { valid: false, seq: expectedSeq, why: `event ${expectedSeq} is missing: seq ${String(event.seq)} stands in its place` };
-    if (event.prev !== head.hash) return { valid: false, seq: event.seq, why: `event ${event.seq} does not follow from the event before it: prev is not that event's hash` };
+    if (event.seq !== expectedSeq)
+      return { valid: false, seq: expectedSeq, why: `event ${expectedSeq} is missing: seq ${String(event.seq)} stands in its place` };
+    if (event.prev !== head.hash)
+      return {
+        valid: false,
+        seq: event.seq,
+        why: `event ${event.seq} does not follow from the event before it: prev is not that event's hash`,
+      };
     const { hash, ...unhashed } = event;
-    if (sha256(canonicalJson(unhashed)) !== hash) return { valid: false, seq: event.seq, why: `event ${event.seq} was changed: its hash does not match its content` };
+    if (sha256(canonicalJson(unhashed)) !== hash)
+      return { valid: false, seq: event.seq, why: `event ${event.seq} was changed: its hash does not match its content` };
     head = { seq: event.seq, hash };
   }
   return { valid: true, events: head.seq, head };

@@ -7,7 +7,11 @@ export class UnusableArchive extends Error {
   readonly row: number | null;
 
   constructor(place: { file: string | null; row?: number; column?: string }, why: string) {
-    const parts = [place.file, place.row === undefined ? null : `row ${place.row}`, place.column === undefined ? null : `column ${place.column}`];
+    const parts = [
+      place.file,
+      place.row === undefined ? null : `row ${place.row}`,
+      place.column === undefined ? null : `column ${place.column}`,
+    ];
     const where = parts.filter((part) => part !== null).join(', ');
     super(where === '' ? why : `${where}: ${why}`);
     this.file = place.file;

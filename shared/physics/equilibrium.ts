@@ -30,5 +30,7 @@ export function equilibriumRad({ geometry, kappa, bigG, phiRad, restRad = 0 }: E
     if (Math.abs(step) <= 1e-15 + 4e-16 * Math.abs(theta)) return theta;
     if (iteration > 8 && Math.abs(step) < 1e-13) return theta;
   }
-  throw new Error(`no stable equilibrium at the turntable angle ${((phiRad * 180) / Math.PI).toFixed(3)} deg: the sources pull harder than the fibre can hold`);
+  throw new Error(
+    `no stable equilibrium at the turntable angle ${((phiRad * 180) / Math.PI).toFixed(3)} deg: the sources pull harder than the fibre can hold`,
+  );
 }

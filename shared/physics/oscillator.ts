@@ -31,7 +31,16 @@ export function oscillator(inertia: number, periodS: number, decayTimeS: number)
   const omegaD = (2 * Math.PI) / periodS;
   const gamma = 1 / decayTimeS;
   const omega0 = Math.hypot(omegaD, gamma);
-  return { inertiaKgM2: inertia, omegaD, gamma, omega0, kappa: inertia * omega0 * omega0, periodS, decayTimeS, quality: omega0 / (2 * gamma) };
+  return {
+    inertiaKgM2: inertia,
+    omegaD,
+    gamma,
+    omega0,
+    kappa: inertia * omega0 * omega0,
+    periodS,
+    decayTimeS,
+    quality: omega0 / (2 * gamma),
+  };
 }
 
 /** The rig's free oscillator from `measured.period_s` and `measured.decayTime_s`; null when either is missing. */

@@ -32,7 +32,8 @@ export interface TorqueGeometry {
  */
 export function geometryOf(rig: RigDocument): TorqueGeometry {
   const { pendulum, sources } = rig;
-  if (sources.shape === 'cylinder') throw new NotYetError('sources.shape: the torque of cylinders is not built yet; use "sphere" or "none"');
+  if (sources.shape === 'cylinder')
+    throw new NotYetError('sources.shape: the torque of cylinders is not built yet; use "sphere" or "none"');
   const pairs: SourcePair[] = [];
   if (sources.shape === 'sphere') {
     if (sources.mass === undefined || sources.orbit === undefined) throw new Error('sources.mass and sources.orbit are needed for spheres');

@@ -21,7 +21,11 @@ describe('the event chain', () => {
     expect(events.map((event) => event.seq)).toEqual([1, 2, 3]);
     expect(events[0]?.prev).toBe('0'.repeat(64));
     expect(events[2]?.prev).toBe(events[1]?.hash);
-    expect(verifyChain(events, sha256)).toEqual({ valid: true, events: 3, head: expect.objectContaining({ seq: 3, hash: events[2]?.hash }) as unknown });
+    expect(verifyChain(events, sha256)).toEqual({
+      valid: true,
+      events: 3,
+      head: expect.objectContaining({ seq: 3, hash: events[2]?.hash }) as unknown,
+    });
   });
 
   test('hashes the canonical JSON of the event without its hash', () => {
@@ -36,11 +40,23 @@ describe('the event chain', () => {
   });
 
   test.each([
-    { what: 'changed data', change: (events: ChainedEvent[]) => Object.assign(events[1] as ChainedEvent, { data: { note: 'other' } }), seq: 2 },
-    { what: 'a changed time', change: (events: ChainedEvent[]) => Object.assign(events[2] as ChainedEvent, { at: '2026-01-02T00:00:00.000Z' }), seq: 3 },
+    {
+      what: 'changed data',
+      change: (events: ChainedEvent[]) => Object.assign(events[1] as ChainedEvent, { data: { note: 'other' } }),
+      seq: 2,
+    },
+    {
+      what: 'a changed time',
+      change: (events: ChainedEvent[]) => Object.assign(events[2] as ChainedEvent, { at: '2026-01-02T00:00:00.000Z' }),
+      seq: 3,
+    },
     { what: 'an event taken out', change: (events: ChainedEvent[]) => events.splice(1, 1), seq: 2 },
     { what: 'a first event taken out', change: (events: ChainedEvent[]) => events.shift(), seq: 1 },
-    { what: 'two events swapped', change: (events: ChainedEvent[]) => events.splice(1, 2, events[2] as ChainedEvent, events[1] as ChainedEvent), seq: 2 },
+    {
+      what: 'two events swapped',
+      change: (events: ChainedEvent[]) => events.splice(1, 2, events[2] as ChainedEvent, events[1] as ChainedEvent),
+      seq: 2,
+    },
   ])('names the event with $what', ({ change, seq }) => {
     const events = chainOf(4);
     change(events);
@@ -57,8 +73,14 @@ describe('the event chain', () => {
 describe('canonical JSON', () => {
   // RFC 8785, section 3.2.2 and 3.2.3: sample object and its canonical form.
   test('of the sample of RFC 8785 is as printed there', () => {
-    const sample = { numbers: [333333333.33333329, 1e30, 4.5, 2e-3, 0.000000000000000000000000001], string: '\u20ac$\u000F\u000aA\'\u0042\u0022\u005c\\"\/', literals: [null, true, false] };
-    expect(canonicalJson(sample)).toBe('{"literals":[null,true,false],"numbers":[333333333.3333333,1e+30,4.5,0.002,1e-27],"string":"€$\\u000f\\nA\'B\\"\\\\\\\\\\"/"}');
+    const sample = {
+      numbers: [333333333.33333329, 1e30, 4.5, 2e-3, 0.000000000000000000000000001],
+      string: '\u20ac$\u000F\u000aA\'\u0042\u0022\u005c\\"\/',
+      literals: [null, true, false],
+    };
+    expect(canonicalJson(sample)).toBe(
+      '{"literals":[null,true,false],"numbers":[333333333.3333333,1e+30,4.5,0.002,1e-27],"string":"€$\\u000f\\nA\'B\\"\\\\\\\\\\"/"}',
+    );
   });
 
   test('of something that is not JSON is refused', () => {

@@ -17,12 +17,21 @@ describe('instants', () => {
     for (const ms of [946684800000.05, 1772402399999.999, 1.5]) expect(Math.abs(parseInstant(formatInstant(ms)) - ms)).toBeLessThan(6e-4);
   });
 
-  test.each(['', '2000-01-01', '2000-01-01T00:00:00', '2000-01-01T00:00:00+00:00', '2000-01-01 00:00:00Z', '2000-02-30T00:00:00Z', '2000-01-01T24:00:00Z', '2000-01-01T00:61:00Z', '2000-01-01T00:00:00.Z', '2000-01-01T00:00:0xZ', '1772402400'])(
-    'refuse %p',
-    (text) => {
-      expect(parseInstant(text)).toBeNaN();
-    },
-  );
+  test.each([
+    '',
+    '2000-01-01',
+    '2000-01-01T00:00:00',
+    '2000-01-01T00:00:00+00:00',
+    '2000-01-01 00:00:00Z',
+    '2000-02-30T00:00:00Z',
+    '2000-01-01T24:00:00Z',
+    '2000-01-01T00:61:00Z',
+    '2000-01-01T00:00:00.Z',
+    '2000-01-01T00:00:0xZ',
+    '1772402400',
+  ])('refuse %p', (text) => {
+    expect(parseInstant(text)).toBeNaN();
+  });
 
   test('a reader for a column goes on over midnight and over a bad row', () => {
     const read = instantReader();

@@ -151,7 +151,9 @@ const table = checkValues();
       expect(relativeDifference(G * torquePerG(beamOnly(geometry), at), values[`tau_rod_${key}`] as number)).toBeLessThan(1e-9);
     }
     for (const [key, at] of Object.entries({ '': phi, _45: 45 * degrees, _90: 90 * degrees })) {
-      expect(relativeDifference(G * torqueGradientPerG(pointsOnly(geometry), at), values[`dtau_dpsi_pts${key}`] as number)).toBeLessThan(1e-9);
+      expect(relativeDifference(G * torqueGradientPerG(pointsOnly(geometry), at), values[`dtau_dpsi_pts${key}`] as number)).toBeLessThan(
+        1e-9,
+      );
     }
   });
 });

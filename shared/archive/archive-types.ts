@@ -1,0 +1,10 @@
+/** SHA-256 in lower-case hex of bytes, or of a text as UTF-8. */
+export type Sha256OfBytes = (data: string | Uint8Array) => string;
+
+/** Path inside the archive, with forward slashes, to content. */
+export type ArchiveFiles = ReadonlyMap<string, Uint8Array | string>;
+
+export interface ArchiveWarning {
+  code: string;
+  message: string;
+}

@@ -1,0 +1,143 @@
+import * as z from 'zod';
+import { protocolDocumentSchema, registeredEvaluationSchema, type ProtocolDocument } from '../protocol/document';
+import { rigDocumentSchema, type RigDocument } from '../rig/document';
+import type { ArchiveFiles, ArchiveWarning, Sha256OfBytes } from './archive-types';
+import { channelPath, readChannel } from './channel-csv';
+import { exclusionsFile, readExclusions, type Exclusion } from './exclusions';
+import type { ChannelInfo, ChannelSeries, StepRow } from './run-records';
+import { readSteps, stepsFile } from './step-csv';
+import { UnusableArchive } from './unusable-archive';
+import { readPackage, verifyFiles, type PackageDescriptor, type ResourceDescriptor } from './verify-package';
+import { verifyEvents, type ArchiveChain } from './verify-events';
+
+/** A verified archive. Channels are read when asked for, so that a night's environment costs nothing to the evaluation. */
+export interface Archive {
+  rig: RigDocument;
+  steps: StepRow[];
+  /** The evaluation registered in protocol.json; null where the protocol registers none or is absent. */
+  registered: ProtocolDocument['evaluation'] | null;
+  /** The protocol, where it is one that this version can read. */
+  protocol: ProtocolDocument | null;
+  exclusions: Exclusion[];
+  chain: ArchiveChain;
+  channels: ChannelInfo[];
+  /** @throws UnusableArchive naming the row of the first sample that cannot be read. */
+  readChannel(name: string): ChannelSeries;
+  warnings: ArchiveWarning[];
+}
+
+/**
+ * Verifies and reads an archive: sizes and hashes of all listed files, the event chain, its agreement with run.json and
+ * with the `archived` event, then rig, steps, protocol and exclusions.
+ * @throws UnusableArchive saying which file and row, and why.
+ */
+export function readArchive(files: ArchiveFiles, sha256: Sha256OfBytes): Archive {
+  const descriptor = readPackage(files);
+  const warnings: ArchiveWarning[] = [];
+  verifyFiles(descriptor, files, sha256, warnings);
+  const chain = verifyEvents(files, sha256, warnings);
+  const rig = readJson(files, 'rig.json', rigDocumentSchema);
+  const steps = readSteps(requiredText(files, stepsFile));
+  const { protocol, registered } = readProtocol(files, warnings);
+  const exclusions = files.has(exclusionsFile) ? readExclusions(requiredText(files, exclusionsFile)) : [];
+  const resources = channelResources(descriptor);
+  return {
+    rig,
+    steps,
+    protocol,
+    registered,
+    exclusions,
+    chain,
+    warnings,
+    channels: resources.map(({ info }) => info),
+    readChannel: (name) => {
+      const found = resources.find(({ info }) => info.name === name);
+      if (found === undefined)
+        throw new UnusableArchive(
+          { file: 'datapackage.json' },
+          `there is no channel "${name}"; the archive holds ${listOf(resources.map(({ info }) => info.name))}`,
+        );
+      return { info: found.info, ...readChannel(found.path, requiredText(files, found.path)) };
+    },
+  };
+}
+
+export const listOf = (names: readonly string[]) => (names.length === 0 ? 'none' : names.map((name) => `"${name}"`).join(', '));
+
+function requiredText(files: ArchiveFiles, path: string): string {
+  const content = files.get(path);
+  if (content === undefined) throw new UnusableArchive({ file: path }, 'the file is missing from the archive');
+  return typeof content === 'string' ? content : decode(path, content);
+}
+
+function decode(path: string, bytes: Uint8Array): string {
+  try {
+    return new TextDecoder('utf-8', { fatal: true }).decode(bytes);
+  } catch {
+    throw new UnusableArchive({ file: path }, 'the file is not UTF-8 text');
+  }
+}
+
+function parseJson(files: ArchiveFiles, path: string): unknown {
+  try {
+    return JSON.parse(requiredText(files, path).replace(/^\uFEFF/, ''));
+  } catch (error) {
+    if (error instanceof UnusableArchive) throw error;
+    throw new UnusableArchive({ file: path }, `not readable as JSON: ${(error as Error).message}`);
+  }
+}
+
+function readJson<S extends z.ZodType>(files: ArchiveFiles, path: string, schema: S): z.output<S> {
+  const parsed = schema.safeParse(parseJson(files, path));
+  if (!parsed.success) throw new UnusableArchive({ file: path }, firstIssue(parsed.error));
+  return parsed.data;
+}
+
+function firstIssue(error: z.ZodError): string {
+  const issue = error.issues[0];
+  const more = error.issues.length > 1 ? ` (and ${error.issues.length - 1} more)` : '';
+  return issue === undefined
+    ? 'not as the format has it'
+    : `${issue.path.length === 0 ? '' : `${issue.path.join('.')}: `}${issue.message}${more}`;
+}
+
+/** Only the registered evaluation matters here, so a protocol of a later version is warned of, not refused. */
+function readProtocol(files: ArchiveFiles, warnings: ArchiveWarning[]): Pick<Archive, 'protocol' | 'registered'> {
+  if (!files.has('protocol.json')) return { protocol: null, registered: null };
+  const json = parseJson(files, 'protocol.json');
+  const whole = protocolDocumentSchema.safeParse(json);
+  if (whole.success) return { protocol: whole.data, registered: whole.data.evaluation ?? null };
+  const part = z.looseObject({ evaluation: registeredEvaluationSchema.optional() }).safeParse(json);
+  if (!part.success) throw new UnusableArchive({ file: 'protocol.json' }, firstIssue(part.error));
+  warnings.push({
+    code: 'protocol-unreadable',
+    message: `protocol.json is not a protocol that this version knows (${firstIssue(whole.error)}); only its registered evaluation was read`,
+  });
+  return { protocol: null, registered: part.data.evaluation ?? null };
+}
+
+const channelFactsSchema = z.looseObject({
+  channel: z.string().min(1).optional(),
+  quantity: z.string().default(''),
+  unit: z.string(),
+  role: z.enum(['deflection', 'environment', 'turntable']),
+});
+
+function channelResources(descriptor: PackageDescriptor): { path: string; info: ChannelInfo }[] {
+  return descriptor.resources
+    .filter(({ path }) => path.startsWith('channels/') && path.endsWith('.csv'))
+    .map((resource) => ({ path: resource.path, info: channelInfo(resource) }));
+}
+
+function channelInfo(resource: ResourceDescriptor): ChannelInfo {
+  const facts = channelFactsSchema.safeParse(resource.evenfall ?? {});
+  if (!facts.success)
+    throw new UnusableArchive(
+      { file: 'datapackage.json' },
+      `the resource ${resource.path} must say evenfall: {quantity, unit, role}: ${firstIssue(facts.error)}`,
+    );
+  const { channel, quantity, unit, role } = facts.data;
+  const fileName = resource.path.slice('channels/'.length, -'.csv'.length);
+  const name = channel !== undefined && channelPath(channel) === resource.path ? channel : fileName;
+  return { name, quantity, unit, role };
+}
