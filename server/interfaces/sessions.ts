@@ -1,7 +1,8 @@
 /** Sessions behind a small port: the database holds only the SHA-256 of a token, the cookie holds the token. */
 export interface SessionPort {
+  /** `expiresAt` is the end of the absolute limit: the life of the cookie. */
   create(userId: string, device: { userAgent: string; ip: string }): Promise<{ token: string; expiresAt: Date }>;
-  /** Null when unknown, expired or ended. Renews a session that is past half its idle life. */
+  /** Null when unknown, ended, unused for longer than the idle limit or older than the absolute one. Renews a session that is past half its idle life. */
   validate(token: string): Promise<Session | null>;
   end(token: string): Promise<void>;
   endAllOf(userId: string): Promise<void>;
@@ -13,5 +14,6 @@ export interface Session {
   createdAt: Date;
   /** When the password was last given. */
   authAt: Date;
+  /** When it ends if it is not used until then. */
   expiresAt: Date;
 }
