@@ -1,0 +1,66 @@
+import type { RunState, RunSummary, RunView, StepRowView } from '@/shared/contracts/runs';
+import { laneOf, type Lane } from '@/components/charts';
+import { formatClock } from '@/shared/lib/format-time';
+import type { IconName, Tone } from '@/components/ui';
+
+/** The words of a run. Pure. */
+
+const capital = (text: string) => text.charAt(0).toUpperCase() + text.slice(1);
+
+export interface StateMark {
+  icon: IconName;
+  tone: Tone;
+}
+
+const stateWords: Record<RunState, string> = {
+  rehearsing: 'Rehearsing', starting: 'Starting', running: 'Running', holding: 'Holding: coming to rest', held: 'Held', stopping: 'Stopping', finished: 'Finished', stopped: 'Stopped', failed: 'Failed',
+};
+const stateMarks: Record<RunState, StateMark> = {
+  rehearsing: { icon: 'repeat', tone: 'lamp' }, starting: { icon: 'start', tone: 'lamp' }, running: { icon: 'start', tone: 'lamp' }, holding: { icon: 'hold', tone: 'lamp' }, held: { icon: 'hold', tone: 'lamp' },
+  stopping: { icon: 'stop', tone: 'danger' }, finished: { icon: 'passed', tone: 'good' }, stopped: { icon: 'stop', tone: 'danger' }, failed: { icon: 'failed', tone: 'danger' },
+};
+
+export const isOver = (state: RunState): boolean => state === 'finished' || state === 'stopped' || state === 'failed';
+
+const laneMark = (lane: Lane): StateMark => (lane === 'near' ? { icon: 'near', tone: 'near' } : lane === 'far' ? { icon: 'far', tone: 'far' } : { icon: 'clear', tone: 'dim' });
+
+/** A row of the log as a title: `Dwell, near side`, `Swing to far`, `Wait`. */
+export function stepTitle(row: Pick<StepRowView, 'kind' | 'station' | 'label'>): string {
+  const side = laneOf(row.station) === 'other' ? (row.station === '' ? '' : ` at ${row.station}`) : `, ${row.station} side`;
+  switch (row.kind) {
+    case 'home':
+      return 'Home: finding the edge';
+    case 'swing':
+      return row.station === '' ? 'Swing' : `Swing to ${row.station}`;
+    case 'mark':
+      return row.label === '' ? 'Mark' : `Mark: ${row.label}`;
+    case 'ring-down':
+      return `Ring-down${side}`;
+    default:
+      return capital(row.kind) + (row.kind === 'wait' ? '' : side);
+  }
+}
+
+export const stepMark = (row: Pick<StepRowView, 'kind' | 'station'>): StateMark => (row.kind === 'home' ? { icon: 'home', tone: 'text' } : laneMark(laneOf(row.station)));
+
+/** What the run is doing, in a few words, with the mark that says the same without colour. */
+export function runTitle(view: Pick<RunView, 'state' | 'current'>): { words: string; mark: StateMark } {
+  if (view.state === 'running' && view.current !== null) return { words: stepTitle(view.current), mark: stepMark(view.current) };
+  return { words: stateWords[view.state], mark: stateMarks[view.state] };
+}
+
+export const stateWord = (state: RunState): string => stateWords[state];
+export const stateMark = (state: RunState): StateMark => stateMarks[state];
+
+/** How a run ended, in one line: `Finished at 07:11`, `Stopped at 02:14: by Anna`. */
+export function outcomeTitle(view: Pick<RunSummary, 'state' | 'endedAt'>, timeZone: string): string {
+  const at = view.endedAt === null ? '' : ` at ${formatClock(Date.parse(view.endedAt), { timeZone })}`;
+  return `${stateWords[view.state]}${at}`;
+}
+
+const kinds: Record<string, string> = {
+  started: 'Started', 'run-started': 'Started', held: 'Held', resumed: 'Resumed', stopped: 'Stopped', finished: 'Finished', failed: 'Failed', archived: 'Archived',
+};
+
+/** The kind of an event as words: `link-lost` → `Link lost`. */
+export const eventWords = (kind: string): string => kinds[kind] ?? capital(kind.replaceAll(/[-_.]/g, ' '));

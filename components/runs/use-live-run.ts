@@ -1,0 +1,125 @@
+import { useCallback, useEffect, useReducer, useRef } from 'react';
+import { addressOf, call, deviceNowMs, useLab } from '@/components/api';
+import { reportReached } from '@/components/api/connection';
+import { getRun, listSteps, liveMessageSchemas, liveRun, type LiveMessages } from '@/shared/contracts/runs';
+import { liveReducer, noLive, type LiveMessage, type LiveState } from './live-reducer';
+
+const flushMs = 200;
+const reopenMs = 2000;
+const silentMs = 5000;
+const pollMs = 2000;
+const types = Object.keys(liveMessageSchemas) as (keyof LiveMessages)[];
+
+/** A message as it came over the line, or null when it is not one of ours (a newer server may send more kinds). */
+export function readMessage(type: keyof LiveMessages, text: string, receivedAtMs: number): LiveMessage | null {
+  try {
+    const parsed = liveMessageSchemas[type].safeParse(JSON.parse(text));
+    return parsed.success ? ({ type, data: parsed.data, receivedAtMs } as LiveMessage) : null;
+  } catch {
+    return null;
+  }
+}
+
+interface Handlers {
+  onMessage: (message: LiveMessage) => void;
+  onOpen: () => void;
+  onBroken: () => void;
+}
+
+/** Opens the stream and keeps it open. The browser itself reconnects with Last-Event-ID; one that it gave up is opened anew. */
+function openStream(address: string, { onMessage, onOpen, onBroken }: Handlers): () => void {
+  let source: EventSource | null = null;
+  let timer: ReturnType<typeof setTimeout> | undefined;
+  const open = () => {
+    const stream = new EventSource(address);
+    source = stream;
+    stream.onopen = () => {
+      reportReached(true);
+      onOpen();
+    };
+    stream.onerror = () => {
+      onBroken();
+      if (stream.readyState !== 2) return;
+      stream.close();
+      timer = setTimeout(open, reopenMs);
+    };
+    for (const type of types) {
+      stream.addEventListener(type, (event) => {
+        const message = readMessage(type, (event as MessageEvent<string>).data, deviceNowMs());
+        if (message !== null) onMessage(message);
+      });
+    }
+  };
+  open();
+  return () => {
+    clearTimeout(timer);
+    source?.close();
+  };
+}
+
+export interface LiveRun {
+  state: LiveState;
+  /** Why the run could not be loaded at all; null once it is there. */
+  error: unknown;
+  /** Asks for the whole again. */
+  refresh: () => void;
+}
+
+/**
+ * A run as it happens: the stream for what is new, the ordinary routes for what came before, for gaps, and every 2 s
+ * while the stream is silent, so that a confirmation is not missed behind a proxy that swallows streams.
+ */
+export function useLiveRun(runId: string, on = true): LiveRun {
+  const { labId } = useLab();
+  const [state, dispatch] = useReducer(liveReducer, noLive);
+  const [error, setError] = useReducer((_: unknown, next: unknown) => next, null);
+  const waiting = useRef<LiveMessage[]>([]);
+
+  const refresh = useCallback(async () => {
+    try {
+      const params = { labId, runId };
+      const [view, steps] = await Promise.all([call(getRun, { params }), call(listSteps, { params })]);
+      dispatch({ kind: 'loaded', view: view.data, rows: steps.data.items });
+      setError(null);
+    } catch (problem) {
+      setError(problem);
+    }
+  }, [labId, runId]);
+
+  useEffect(() => void refresh(), [refresh]);
+
+  useEffect(() => {
+    if (!on) return undefined;
+    const flush = () => {
+      if (waiting.current.length === 0) return;
+      dispatch({ kind: 'messages', messages: waiting.current });
+      waiting.current = [];
+    };
+    const timer = setInterval(flush, flushMs);
+    const close = openStream(addressOf(liveRun, { params: { labId, runId } }), {
+      onMessage: (message) => waiting.current.push(message),
+      onOpen: () => dispatch({ kind: 'opened' }),
+      onBroken: () => dispatch({ kind: 'broken' }),
+    });
+    return () => {
+      clearInterval(timer);
+      close();
+    };
+  }, [labId, runId, on]);
+
+  const heardAt = useRef<number | null>(null);
+  heardAt.current = state.heardAtMs;
+  useEffect(() => {
+    if (!on) return undefined;
+    const timer = setInterval(() => {
+      if (heardAt.current === null || deviceNowMs() - heardAt.current > silentMs) void refresh();
+    }, pollMs);
+    return () => clearInterval(timer);
+  }, [on, refresh]);
+
+  useEffect(() => {
+    if (state.missed) void refresh();
+  }, [state.missed, refresh]);
+
+  return { state, error, refresh: () => void refresh() };
+}
