@@ -10,8 +10,8 @@ import { pass } from './lib/run.mjs';
 import { giveUp } from './lib/say.mjs';
 import { ensureWebBuild } from './lib/web-build.mjs';
 
-const folder = join(root, 'server', 'boot', 'bench');
-const known = readdirSync(folder).filter((name) => name.endsWith('.ts')).map((name) => name.slice(0, -3)).sort();
+const folder = join(root, 'scripts', 'bench');
+const known = readdirSync(folder).filter((name) => name.endsWith('.ts') && name !== 'report.ts').map((name) => name.slice(0, -3)).sort();
 const wanted = process.argv.slice(2);
 const strange = wanted.filter((name) => !known.includes(name));
 if (strange.length > 0) giveUp(`no benchmark called ${strange.join(', ')}; there are: ${known.join(', ')}`);
