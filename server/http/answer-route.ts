@@ -101,6 +101,7 @@ const hasBody = (req: Request) => req.headers['transfer-encoding'] !== undefined
 
 async function readBody(contract: RouteContract, { req, res, readJson }: { req: Request; res: Response; readJson: RequestHandler }): Promise<unknown> {
   if (contract.consumes !== undefined) {
+    if (req.get('content-encoding') !== undefined) throw new ProblemError('wrong-content-type', 'This route takes the file as it is, without a content encoding.');
     if (req.is(contract.consumes) === false) throw new ProblemError('wrong-content-type', `This route takes ${contract.consumes}; the request said ${req.get('content-type') ?? 'nothing'}.`);
     return undefined;
   }

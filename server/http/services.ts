@@ -2,6 +2,7 @@ import type { Logger } from 'pino';
 import type { Clock } from '../interfaces/clock';
 import type { IdempotencyPort } from '../interfaces/idempotency';
 import type { MailPort } from '../interfaces/mail';
+import type { SampleStore } from '../interfaces/sample-store';
 import type { ServerConfig } from '../interfaces/server-config';
 import type { SessionPort } from '../interfaces/sessions';
 import type { Connection } from '../store/database';
@@ -23,4 +24,9 @@ export interface Services {
   access: AccessDirectory;
   idempotency: IdempotencyPort;
   mail: MailPort;
+  samples: SampleStore;
+  /** Lets everything else have a turn: long work calls it between its parts, so that hold and stop never wait for it. */
+  breathe(): Promise<void>;
+  /** Tells the workers that a job was queued, so that it need not wait for their next look. */
+  pokeJobs(): void;
 }

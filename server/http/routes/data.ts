@@ -1,0 +1,158 @@
+import type { Readable } from 'node:stream';
+import * as contracts from '@/shared/contracts/data';
+import type { ChannelView, ImportView } from '@/shared/contracts/data';
+import { sniffCsv, UnreadableFile } from '@/server/ingest/csv-sniff';
+import { FileTooLarge, FileWatch } from '@/server/ingest/receive-file';
+import * as store from '@/server/store/imports';
+import { findRig } from '@/server/store/rigs';
+import { channelsOfRun, countSamples, extremesOf, findRun, type RunRecord } from '@/server/store/runs-read';
+import { assertMapping, checkViewOf, readImport } from '../import-steps';
+import { isoOf } from '../maker';
+import { notFound, ProblemError } from '../problem-error';
+import { mount } from '../route-context';
+import type { Services } from '../services';
+
+const channelViewOf = (channel: store.ChannelRecord): ChannelView => ({
+  id: channel.id, rigId: channel.rigId, name: channel.name, quantity: channel.quantity, unit: channel.unit, role: channel.role, source: channel.source,
+});
+
+const importViewOf = (file: store.ImportRecord): ImportView => ({
+  id: file.id, runId: file.runId, fileName: file.fileName, state: file.state, bytes: file.bytes, sha256: file.sha256, preview: file.preview,
+});
+
+async function loadRun(services: Services, labId: string, runId: string): Promise<RunRecord> {
+  const run = await findRun(services.database.db, labId, runId);
+  if (run === null) throw notFound('run');
+  return run;
+}
+
+async function loadImport(services: Services, labId: string, importId: string): Promise<store.ImportRecord> {
+  const file = await store.findImport(services.database.db, labId, importId);
+  if (file === null) throw notFound('import');
+  return file;
+}
+
+function assertReceived(file: store.ImportRecord): void {
+  if (file.state === 'stored') throw new ProblemError('not-possible-now', `${file.fileName} is stored already. Begin a new import to read it in another way.`);
+  if (file.state !== 'received') throw new ProblemError('not-possible-now', `The content of ${file.fileName} has not arrived. Send the file first.`);
+}
+
+/** Keeps the file as it comes and looks into its first rows. */
+async function receive(services: Services, file: store.ImportRecord, content: Readable): Promise<void> {
+  const { db } = services.database;
+  const key = { labId: file.labId, importId: file.id };
+  const watch = new FileWatch(services.config.limits.importBytes);
+  try {
+    await store.keepPieces(db, key, watch.watch(content));
+    const preview = sniffCsv(watch.head(), watch.bytes <= watch.head().length);
+    await store.changeImport(db, key, { state: 'received', bytes: watch.bytes, sha256: watch.sha256(), preview });
+  } catch (error) {
+    await store.dropPieces(db, key);
+    await store.changeImport(db, key, { state: error instanceof UnreadableFile ? 'refused' : 'waiting', bytes: 0, sha256: null, preview: null });
+    if (error instanceof UnreadableFile) throw new ProblemError('unreadable-data', `${file.fileName}: ${error.message}`);
+    if (error instanceof FileTooLarge) throw tooLarge(file, services);
+    throw error;
+  }
+}
+
+function tooLarge(file: store.ImportRecord, services: Services): ProblemError {
+  return new ProblemError('too-large', `${file.fileName} is larger than ${String(Math.round(services.config.limits.importBytes / 1_048_576))} MiB. Cut it into parts, or leave out columns that are not needed.`);
+}
+
+/** The channel the samples go to; one that is there already must be of the same kind. */
+async function channelFor(services: Services, run: RunRecord, wanted: { name: string; unit: string }): Promise<store.ChannelRecord> {
+  const channel = await store.findOrMakeChannel(services.database.db, {
+    labId: run.labId, rigId: run.rigId, runId: run.rehearsal ? run.id : null, name: wanted.name, unit: wanted.unit, quantity: wanted.unit.endsWith('rad') ? 'angle' : 'length', role: 'deflection', source: 'import',
+    createdAt: services.clock.utcMs(),
+  });
+  if (channel.source !== 'import') throw new ProblemError('already-exists', `The channel ${channel.name} is filled by the rig itself. Choose another name for the imported one.`, [{ path: 'channelName', message: `a name other than ${channel.name}` }]);
+  if (channel.unit !== wanted.unit) throw new ProblemError('already-exists', `The channel ${channel.name} is in ${channel.unit}, the file in ${wanted.unit}. Choose another name, or the unit ${channel.unit}.`, [{ path: 'channelName', message: `a name other than ${channel.name}` }]);
+  return channel;
+}
+
+export const dataRoutes = [
+  mount(contracts.listChannels, async ({ params, membership, services }) => {
+    const { db } = services.database;
+    if ((await findRig(db, membership.labId, params.rigId)) === null) throw notFound('rig');
+    const channels = await store.channelsOfRig(db, membership.labId, params.rigId);
+    return { items: channels.filter((channel) => channel.runId === null).map(channelViewOf) };
+  }),
+
+  mount(contracts.beginImport, async ({ params, membership, services, body, me }) => {
+    const run = await loadRun(services, membership.labId, params.runId);
+    return importViewOf(await store.beginImport(services.database.db, { labId: run.labId, runId: run.id, fileName: body.fileName, createdAt: services.clock.utcMs(), createdBy: me.name }));
+  }),
+
+  mount(contracts.putImportContent, async ({ params, membership, services, req }) => {
+    const file = await loadImport(services, membership.labId, params.importId);
+    if (file.state === 'stored') assertReceived(file);
+    if (Number(req.headers['content-length'] ?? 0) > services.config.limits.importBytes) throw tooLarge(file, services);
+    await receive(services, file, req);
+    return importViewOf(await loadImport(services, membership.labId, file.id));
+  }),
+
+  mount(contracts.checkImport, async ({ params, membership, services, body }) => {
+    const file = await loadImport(services, membership.labId, params.importId);
+    assertReceived(file);
+    assertMapping(body.mapping);
+    return checkViewOf(await readImport(services, { file, run: await loadRun(services, file.labId, file.runId), mapping: body.mapping }));
+  }),
+
+  mount(contracts.commitImport, async ({ params, membership, services, body }) => {
+    const file = await loadImport(services, membership.labId, params.importId);
+    assertReceived(file);
+    assertMapping(body.mapping);
+    const run = await loadRun(services, file.labId, file.runId);
+    const channel = await channelFor(services, run, { name: body.channelName, unit: body.mapping.unit });
+    const work = { labId: file.labId, importId: file.id, channelId: channel.id, storedAt: services.clock.utcMs(), mapping: body.mapping };
+    try {
+      const { stored, known } = await store.storeImport(services.database, work, async (take) => {
+        const reading = await readImport(services, { file, run, mapping: body.mapping }, take);
+        if (reading.ok) return;
+        const items = reading.problems.map(({ row, column, message }) => ({ path: [row === null ? '' : `row ${String(row)}`, column ?? ''].filter((part) => part !== '').join(', '), message }));
+        const first = items[0];
+        throw new ProblemError('unreadable-data', `Nothing was stored: ${String(reading.problemCount)} problems in ${file.fileName}, the first: ${first === undefined ? '' : [first.path, first.message].filter((part) => part !== '').join(': ')}.`, items);
+      });
+      return { channel: channelViewOf(channel), stored, known };
+    } catch (error) {
+      if (!(error instanceof store.ConflictingSamplesError)) throw error;
+      throw new ProblemError('already-exists', `Nothing was stored: the channel ${channel.name} holds another value at ${isoOf(error.atUtcMs)} already. Choose another channel name.`, [{ path: 'channelName', message: `a name other than ${channel.name}` }]);
+    }
+  }),
+
+  mount(contracts.readSamples, async ({ params, membership, services, query }) => {
+    const run = await loadRun(services, membership.labId, params.runId);
+    const channels = await channelsOfRun(services.database.db, run);
+    const window = { fromUtcMs: query.fromUtcMs ?? run.startedAt ?? run.createdAt, toUtcMs: query.toUtcMs ?? run.endedAt ?? services.clock.utcMs() };
+    if (window.toUtcMs < window.fromUtcMs) throw new ProblemError('invalid-input', 'The window ends before it begins.', [{ path: 'toUtcMs', message: 'not before fromUtcMs' }]);
+    const { channel, total } = await chooseChannel(services, { run, channels, window }, query.channelId);
+    const view = { channel: channel === null ? null : channelViewOf(channel), channels: channels.map(channelViewOf), total };
+    if (channel === null) return { ...view, utcMs: [], value: [] };
+    if (total > query.points) return { ...view, ...(await extremesOf(services.database, { ...window, labId: run.labId, channelId: channel.id }, Math.floor(query.points / 2))) };
+    const batch = await services.samples.read(run.labId, channel.id, window);
+    return { ...view, utcMs: [...batch.utcMs], value: [...batch.value] };
+  }),
+];
+
+interface ChannelChoice {
+  run: RunRecord;
+  channels: readonly store.ChannelRecord[];
+  window: { fromUtcMs: number; toUtcMs: number };
+}
+
+/** The channel asked for, else the registered one, else the first deflection channel with samples in the window. */
+async function chooseChannel(services: Services, { run, channels, window }: ChannelChoice, channelId: string | undefined): Promise<{ channel: store.ChannelRecord | null; total: number }> {
+  const count = (channel: store.ChannelRecord) => countSamples(services.database, { ...window, labId: run.labId, channelId: channel.id });
+  if (channelId !== undefined) {
+    const asked = channels.find((channel) => channel.id === channelId);
+    if (asked === undefined) throw notFound('channel');
+    return { channel: asked, total: await count(asked) };
+  }
+  const registered = run.start.protocol.evaluation?.channel;
+  const deflection = channels.filter((channel) => channel.role === 'deflection').sort((a, b) => Number(b.name === registered) - Number(a.name === registered));
+  for (const channel of deflection) {
+    const total = await count(channel);
+    if (total > 0) return { channel, total };
+  }
+  return { channel: deflection[0] ?? null, total: 0 };
+}

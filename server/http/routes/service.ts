@@ -1,0 +1,30 @@
+import * as z from 'zod';
+import * as contracts from '@/shared/contracts/service';
+import { routes } from '@/shared/contracts';
+import { protocolDocumentSchema } from '@/shared/protocol/document';
+import { ping } from '@/server/store/health';
+import packageFacts from '@/package.json';
+import { isoOf } from '../maker';
+import { openApiOf } from '../openapi';
+import { mount } from '../route-context';
+
+/** Name and version of this program, as archives and the API name it. */
+export const softwareVersion: string = packageFacts.version;
+
+const openApi = JSON.stringify(openApiOf(routes, softwareVersion));
+
+const protocolSchema = JSON.stringify({ $id: '/api/schemas/protocol-1.json', title: 'Evenfall protocol, format 1', ...z.toJSONSchema(protocolDocumentSchema, { target: 'draft-2020-12', io: 'input' }) });
+
+export const serviceRoutes = [
+  mount(contracts.getHealth, async ({ services }) => ({ ok: await ping(services.database), version: softwareVersion, serverAt: isoOf(services.clock.utcMs()), demo: services.config.demo })),
+
+  mount(contracts.getOpenApi, ({ res }) => {
+    res.set('Cache-Control', 'no-cache').type('application/json').send(openApi);
+    return undefined;
+  }),
+
+  mount(contracts.getProtocolSchema, ({ res }) => {
+    res.set('Cache-Control', 'no-cache').type('application/schema+json').send(protocolSchema);
+    return undefined;
+  }),
+];
