@@ -19,3 +19,7 @@ export interface JobQueue {
   /** Puts the job back for a later attempt, or gives it up after the last one. */
   fail(job: Job, why: string): Promise<void>;
 }
+
+/** Does the work of one kind of job; a rejection puts the job back or gives it up. */
+export type JobHandler = (job: Job) => Promise<void>;
+export type JobHandlers = Readonly<Record<string, JobHandler>>;
