@@ -24,17 +24,24 @@ function pendulumOf(rig: RigDocument): Pendulum | null {
   return oscillator === null ? null : { geometry: geometryOf(rig), oscillator };
 }
 
-const equilibriumAt = ({ geometry, oscillator }: Pendulum, angleDeg: number): number =>
-  equilibriumRad({ geometry, kappa: oscillator.kappa, bigG: CODATA_2022_G.value, phiRad: angleDeg * RAD_PER_DEG });
+/** NaN where the sources would pull harder than the fibre can hold, as at an angle inside a keep-out arc. */
+function equilibriumAt({ geometry, oscillator }: Pendulum, angleDeg: number): number {
+  try {
+    return equilibriumRad({ geometry, kappa: oscillator.kappa, bigG: CODATA_2022_G.value, phiRad: angleDeg * RAD_PER_DEG });
+  } catch {
+    return Number.NaN;
+  }
+}
 
 /**
  * Pendulum angle (rad) at which the pendulum comes to rest with the sources at the turntable angle (deg), with G of CODATA 2022; null
- * where the rig's period or decay time is not measured.
+ * where the rig's period or decay time is not measured, or where there is no equilibrium.
  * @throws NotYetError for cylinders.
  */
 export function predictEquilibriumRad(rig: RigDocument, angleDeg: number): number | null {
   const pendulum = pendulumOf(rig);
-  return pendulum === null ? null : equilibriumAt(pendulum, angleDeg);
+  const restRad = pendulum === null ? Number.NaN : equilibriumAt(pendulum, angleDeg);
+  return Number.isNaN(restRad) ? null : restRad;
 }
 
 /**
@@ -49,6 +56,7 @@ export function predictSignal(rig: RigDocument): PredictedSignal | null {
   if (pendulum === null || near === undefined || far === undefined) return null;
   const nearRad = equilibriumAt(pendulum, near.value);
   const farRad = equilibriumAt(pendulum, far.value);
+  if (Number.isNaN(nearRad - farRad)) return null;
   const middleRad = (nearRad + farRad) / 2;
   const lever = leverOf(rig);
   return {
@@ -68,13 +76,15 @@ export interface PredictedDeflection {
 /**
  * The pendulum's angle over a timeline at `points` evenly spaced instants: at rest at first, then the exact response of the linear
  * oscillator to each swing, with the frequency that the torque gradient gives it while the sources stand. Good for a strip, not for
- * an evaluation (the ringing is taken as small). Null where the rig's period or decay time is not measured.
+ * an evaluation (the ringing is taken as small). Null where the rig's period or decay time is not measured, or where the sources go to an
+ * angle at which the pendulum has no equilibrium.
  * @throws NotYetError for cylinders.
  */
 export function predictDeflection(rig: RigDocument, timeline: Pick<Timeline, 'items' | 'startUtcMs' | 'endUtcMs'>, points: number): PredictedDeflection | null {
   const pendulum = pendulumOf(rig);
   if (pendulum === null) return null;
   const segments = segmentsOf(pendulum, timeline);
+  if (segments.some(({ restRad }) => Number.isNaN(restRad))) return null;
   const result: PredictedDeflection = { utcMs: [], rad: [], equilibriumRad: [] };
   let state = { x: 0, v: 0, restRad: segments[0]?.restRad ?? 0 };
   let index = 0;
