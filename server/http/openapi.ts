@@ -20,7 +20,7 @@ class Components {
 
   /** The JSON Schema of a zod schema; parts that refer to themselves move to the components under `name`. */
   add(name: string, of: z.ZodType, io: 'input' | 'output'): Json {
-    const { $schema: _dialect, $defs, ...whole } = z.toJSONSchema(of, { target: 'draft-2020-12', io, unrepresentable: 'any', metadata: named }) as Json;
+    const { $defs, ...whole } = z.toJSONSchema(of, { target: 'draft-2020-12', io, unrepresentable: 'any', metadata: named }) as Json;
     const nameOf = (part: string) => (part.startsWith('__') ? `${name}.${part}` : part);
     const rename = (value: unknown): unknown => {
       if (Array.isArray(value)) return value.map(rename);
@@ -28,9 +28,10 @@ class Components {
       return Object.fromEntries(Object.entries(value).map(([key, inner]) => [key, key === '$ref' && typeof inner === 'string' ? `#/components/schemas/${nameOf(inner.replace('#/$defs/', ''))}` : rename(inner)]));
     };
     for (const [part, definition] of Object.entries(($defs ?? {}) as Record<string, Json>)) {
-      const { id: _name, ...schema } = definition;
-      this.schemas[nameOf(part)] = rename(schema) as Json;
+      delete definition.id;
+      this.schemas[nameOf(part)] = rename(definition) as Json;
     }
+    delete whole.$schema;
     return rename(whole) as Json;
   }
 }
