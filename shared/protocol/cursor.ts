@@ -1,8 +1,8 @@
 import type { RepeatStep, Step } from './document';
 import { nextOccurrenceUtcMs } from './durations';
-import { type LeafStep, type ProtocolPlan, stateAfterIfPossible } from './step-effect';
+import { type LeafStep, type CursorPlan, stateAfterIfPossible } from './step-effect';
 
-export type { LeafStep, ProtocolPlan } from './step-effect';
+export type { LeafStep, CursorPlan } from './step-effect';
 
 /** A protocol executes at most this many steps. */
 export const greatestStepCount = 10_000;
@@ -51,7 +51,7 @@ export function beginCursor(): CursorState {
  * is a call whose cursor is dropped.
  * @throws RangeError beyond 10,000 executed steps, and for a repeat that goes round without a step.
  */
-export function advanceCursor(plan: ProtocolPlan, cursor: CursorState, moment: CursorMoment): { item: PlannedItem | null; cursor: CursorState } {
+export function advanceCursor(plan: CursorPlan, cursor: CursorState, moment: CursorMoment): { item: PlannedItem | null; cursor: CursorState } {
   const frames = cursor.frames.map((frame) => ({ ...frame }));
   for (let decisions = 0; decisions <= greatestStepCount; decisions += 1) {
     const lists = listsOf(plan.protocol.steps, frames);
@@ -102,26 +102,26 @@ function itemOf(lists: readonly (readonly Step[])[], frames: readonly CursorFram
   };
 }
 
-function atEnd(plan: ProtocolPlan, cursor: CursorState): { item: PlannedItem | null; cursor: CursorState } {
+function atEnd(plan: CursorPlan, cursor: CursorState): { item: PlannedItem | null; cursor: CursorState } {
   const station = plan.protocol.atEnd?.station;
   if (station === undefined || cursor.atEndGiven) return { item: null, cursor };
   const item: PlannedItem = { path: 'atEnd.swing', documentPath: 'atEnd.swing', step: { kind: 'swing', to: station } };
   return { item, cursor: { ...cursor, executed: cursor.executed + 1, atEndGiven: true } };
 }
 
-function deadlineOf(repeat: RepeatStep, plan: ProtocolPlan, moment: CursorMoment): number | null {
+function deadlineOf(repeat: RepeatStep, plan: CursorPlan, moment: CursorMoment): number | null {
   if (repeat.until === undefined || !('localTime' in repeat.until)) return null;
   return nextOccurrenceUtcMs({ localTime: repeat.until.localTime, timeZone: plan.timeZone, utcMs: moment.utcMs });
 }
 
-function anotherPass(repeat: RepeatStep, frame: CursorFrame, context: { plan: ProtocolPlan; moment: CursorMoment }): boolean {
+function anotherPass(repeat: RepeatStep, frame: CursorFrame, context: { plan: CursorPlan; moment: CursorMoment }): boolean {
   if (frame.deadlineUtcMs !== null) return passEndsBy(repeat, frame.deadlineUtcMs, context);
   return frame.pass < (repeat.times ?? 0);
 }
 
 /** Whether a pass of the repeat that began at the moment would end, by plan, no later than the deadline. */
-function passEndsBy(repeat: RepeatStep, deadlineUtcMs: number, { plan, moment }: { plan: ProtocolPlan; moment: CursorMoment }): boolean {
-  const passPlan: ProtocolPlan = { ...plan, protocol: { steps: repeat.steps } };
+function passEndsBy(repeat: RepeatStep, deadlineUtcMs: number, { plan, moment }: { plan: CursorPlan; moment: CursorMoment }): boolean {
+  const passPlan: CursorPlan = { ...plan, protocol: { steps: repeat.steps } };
   let state = { ...moment, swingStartUtcMs: null as number | null };
   let cursor = beginCursor();
   while (state.utcMs <= deadlineUtcMs) {

@@ -6,7 +6,7 @@ import { stationAt } from './stations';
 export type LeafStep = Exclude<Step, RepeatStep>;
 
 /** What a protocol is carried out on. */
-export interface ProtocolPlan {
+export interface CursorPlan {
   protocol: Pick<ProtocolDocument, 'steps' | 'atEnd'>;
   rig: RigDocument;
   /** IANA zone of the lab. */
@@ -26,7 +26,7 @@ export interface PlanState {
  * the kinds that are not built yet count as none.
  * @throws UnplayableStep where the step cannot be carried out on the rig.
  */
-export function stateAfter(step: LeafStep, plan: Pick<ProtocolPlan, 'rig' | 'timeZone'>, state: PlanState): PlanState {
+export function stateAfter(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone'>, state: PlanState): PlanState {
   const { rig, timeZone } = plan;
   const at = (utcMs: number, angleDeg = state.angleDeg): PlanState => ({ utcMs, angleDeg, swingStartUtcMs: null });
   switch (step.kind) {
@@ -52,7 +52,7 @@ export function stateAfter(step: LeafStep, plan: Pick<ProtocolPlan, 'rig' | 'tim
  * As `stateAfter`, for drafts and for looking ahead: a step that cannot be carried out is passed over, and a beat whose swing is not known
  * counts from its own start, which is the longest it can be.
  */
-export function stateAfterIfPossible(step: LeafStep, plan: Pick<ProtocolPlan, 'rig' | 'timeZone'>, state: PlanState): PlanState {
+export function stateAfterIfPossible(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone'>, state: PlanState): PlanState {
   const beatAlone = step.kind === 'dwell' && step.beat_periods !== undefined && state.swingStartUtcMs === null;
   try {
     return stateAfter(step, plan, beatAlone ? { ...state, swingStartUtcMs: state.utcMs } : state);

@@ -1,5 +1,5 @@
 import type { RigDocument } from '../rig/document';
-import { advanceCursor, beginCursor, greatestStepCount, type PlannedItem, type ProtocolPlan } from './cursor';
+import { advanceCursor, beginCursor, greatestStepCount, type PlannedItem, type CursorPlan } from './cursor';
 import type { StepKind } from './document';
 import { stationAt } from './stations';
 import { type PlanState, stateAfterIfPossible, stationAfter } from './step-effect';
@@ -35,7 +35,7 @@ export interface Timeline {
  * The protocol as it would run if all goes by plan, from a start in UTC ms at a turntable angle in deg. Made for drafts too: a step that
  * cannot be carried out takes no time, and a plan without an end is cut off.
  */
-export function planTimeline(plan: ProtocolPlan, start: { utcMs: number; angleDeg: number }): Timeline {
+export function planTimeline(plan: CursorPlan, start: { utcMs: number; angleDeg: number }): Timeline {
   const items: TimelineItem[] = [];
   let state: PlanState = { ...start, swingStartUtcMs: null };
   let station = stationAt(plan.rig, start.angleDeg);
@@ -53,7 +53,7 @@ export function planTimeline(plan: ProtocolPlan, start: { utcMs: number; angleDe
   }
 }
 
-function tryAdvance(plan: ProtocolPlan, cursor: ReturnType<typeof beginCursor>, state: PlanState): ReturnType<typeof advanceCursor> | 'endless' {
+function tryAdvance(plan: CursorPlan, cursor: ReturnType<typeof beginCursor>, state: PlanState): ReturnType<typeof advanceCursor> | 'endless' {
   try {
     return advanceCursor(plan, cursor, state);
   } catch (error) {
