@@ -2,6 +2,7 @@ import { Redirect, usePathname, type Href } from 'expo-router';
 import type { ReactNode } from 'react';
 import { View } from 'react-native';
 import { useConnection, useSession } from '@/components/api';
+import { RunningBar } from '@/components/runs/running-bar';
 import { Empty, Loading, Offline } from '@/components/ui';
 import { NavigationBar } from './navigation-bar';
 
@@ -23,7 +24,10 @@ export function Shell({ children }: { children: ReactNode }) {
             Your account belongs to no lab. Ask an owner to invite you: the mail holds a link.
           </Empty>
         ) : (
-          children
+          <>
+            <RunningBar />
+            {children}
+          </>
         )}
       </View>
     </View>

@@ -88,10 +88,10 @@ function KeepButton({ label, icon, onConfirm, onKeyboard, disabled = false, busy
         className={`min-h-action select-none overflow-hidden rounded-action border-2 border-lamp bg-panel2 ${off ? 'opacity-50' : ''}`}
         style={{ touchAction: 'none' } as object}
       >
-        {keeping ? <View className="ef-fill absolute inset-0 bg-lamp" style={{ animationDuration: `${keepMs}ms` } as object} /> : null}
+        {keeping ? <View className="ef-fill absolute inset-0 bg-lamp opacity-30" style={{ animationDuration: `${keepMs}ms` } as object} /> : null}
         <View className="min-h-action flex-row items-center justify-center gap-2 px-5">
-          {icon === undefined ? null : <Icon name={icon} size={24} tone={keeping ? 'text' : 'lamp'} />}
-          <Body size={17} strong tone={keeping ? 'text' : 'lamp'} className={keeping ? 'mix-blend-difference' : ''}>
+          {icon === undefined ? null : <Icon name={icon} size={24} tone="lamp" />}
+          <Body size={17} strong tone={keeping ? 'text' : 'lamp'}>
             {busy ? 'Sending' : keeping ? 'Keep pressed' : label}
           </Body>
         </View>

@@ -1,9 +1,5 @@
-import { Empty, Screen } from '@/components/ui';
+import { RigsScreen } from '@/components/rigs/rigs-screen';
 
 export default function Rigs() {
-  return (
-    <Screen title="Rigs">
-      <Empty title="Nothing here yet" />
-    </Screen>
-  );
+  return <RigsScreen />;
 }

@@ -1,0 +1,5 @@
+import { RigScreen } from '@/components/rigs/rig-screen';
+
+export default function Rig() {
+  return <RigScreen />;
+}

@@ -1,0 +1,5 @@
+import { RigRevisionsScreen } from '@/components/rigs/rig-revisions-screen';
+
+export default function RigRevisions() {
+  return <RigRevisionsScreen />;
+}

@@ -1,0 +1,5 @@
+import { StartScreen } from '@/components/rigs/start-screen';
+
+export default function StartRun() {
+  return <StartScreen />;
+}

@@ -1,0 +1,38 @@
+import { useState } from 'react';
+import { View } from 'react-native';
+import { Field, Label, Tabs } from '@/components/ui';
+import type { LinkSettings } from '@/shared/contracts/rigs';
+
+interface LinkFormProps {
+  link: LinkSettings;
+  onChange: (link: LinkSettings) => void;
+  errors: Record<string, string>;
+}
+
+const usualBaud = 115_200;
+
+/** Simulated controller, or a serial line by its path and speed. What was typed for the line survives a look at the other choice. */
+export function LinkForm({ link, onChange, errors }: LinkFormProps) {
+  const [path, setPath] = useState(link.kind === 'serial' ? link.path : '');
+  const [baud, setBaud] = useState(String(link.kind === 'serial' ? link.baudRate : usualBaud));
+  const baudRate = Number(baud);
+  const serial = (change: { path?: string; baud?: string }) => {
+    const next = { path, baud, ...change };
+    setPath(next.path);
+    setBaud(next.baud);
+    onChange({ kind: 'serial', path: next.path.trim(), baudRate: Number(next.baud) || usualBaud });
+  };
+  return (
+    <View className="gap-4">
+      <Tabs label="Kind of link" value={link.kind} options={[{ value: 'simulated', label: 'Simulated' }, { value: 'serial', label: 'Serial line' }]} onChange={(kind) => (kind === 'simulated' ? onChange({ kind }) : serial({}))} />
+      {link.kind === 'simulated' ? (
+        <Label>A controller inside the server, with the same line protocol and limits, and a pendulum that answers to it. For learning, rehearsing and tests.</Label>
+      ) : (
+        <>
+          <Field label="Path of the line" value={path} onChange={(next) => serial({ path: next })} mono placeholder="/dev/pts/4" hint="As the server sees it. In this version a pseudo-terminal; real ports come with the controller's own acceptance." error={errors['path']} testID="link-path" />
+          <Field label="Speed" value={baud} onChange={(next) => serial({ baud: next })} type="number" unit="baud" error={errors['baudRate'] ?? (Number.isInteger(baudRate) && baudRate >= 300 && baudRate <= 1_000_000 ? undefined : 'a whole number from 300 to 1 000 000')} />
+        </>
+      )}
+    </View>
+  );
+}

@@ -1,0 +1,75 @@
+import { useLocalSearchParams, useRouter, type Href } from 'expo-router';
+import { useState } from 'react';
+import { fieldErrors, useLabMutation, useMay, wordsOf } from '@/components/api';
+import { Body, Button, Icon, Loading, Panel, ProblemNotice, Screen, useToast } from '@/components/ui';
+import { changeLink, tryLink, type LinkSettings, type RigView } from '@/shared/contracts/rigs';
+import { LinkForm } from './link-form';
+import { linkName } from './link-words';
+import { useRefreshRigs, useRig } from './use-rig';
+
+/** The page on which the line to a rig's controller is chosen and tried. */
+export function LinkScreen() {
+  const { rigId } = useLocalSearchParams<{ rigId: string }>();
+  const query = useRig(rigId);
+  const rig = query.data?.data;
+  const back = { href: `/rigs/${rigId}` as Href, label: rig?.name ?? 'the rig' };
+  if (rig === undefined) {
+    return (
+      <Screen title="Link" back={back}>
+        {query.isError ? <ProblemNotice title="The rig could not be read" {...wordsOf(query.error)} /> : <Loading label="Loading the rig" />}
+      </Screen>
+    );
+  }
+  return (
+    <Screen title={`Link of ${rig.name}`} back={back} testID="link-screen">
+      <LinkChoice rig={rig} />
+    </Screen>
+  );
+}
+
+function LinkChoice({ rig }: { rig: RigView }) {
+  const router = useRouter();
+  const toast = useToast();
+  const refresh = useRefreshRigs();
+  const mayEdit = useMay('rig.edit');
+  const [link, setLink] = useState<LinkSettings>(rig.link);
+  const attempt = useLabMutation(tryLink);
+  const save = useLabMutation(changeLink, () => {
+    refresh();
+    toast.show({ text: `${rig.name} is now reached over ${linkName(link)}.` });
+    router.replace(`/rigs/${rig.id}` as Href);
+  });
+  const problem = attempt.error ?? save.error;
+  const params = { rigId: rig.id };
+  const incomplete = link.kind === 'serial' && link.path.trim() === '';
+  if (!mayEdit.ok) return <Body tone="dim">{mayEdit.why}</Body>;
+  return (
+    <>
+      <LinkForm
+        link={link}
+        onChange={(next) => {
+          attempt.reset();
+          save.reset();
+          setLink(next);
+        }}
+        errors={fieldErrors(problem)}
+      />
+      {attempt.data === undefined ? null : <TryResult {...attempt.data.data} />}
+      {problem === null ? null : <ProblemNotice title={attempt.isError ? 'The link could not be tried' : 'The link was not changed'} {...wordsOf(problem)} />}
+      <Button icon="link" label="Try: say hello, move nothing" busy={attempt.isPending} disabled={incomplete} onPress={() => attempt.mutate({ params, body: link })} testID="try-link" />
+      <Button kind="primary" size="action" label="Use this link" busy={save.isPending} disabled={incomplete} onPress={() => save.mutate({ params, body: link })} testID="save-link" />
+    </>
+  );
+}
+
+function TryResult({ ok, detail, firmware }: { ok: boolean; detail: string; firmware: string | null }) {
+  return (
+    <Panel edge={ok ? 'good' : 'danger'} className="flex-row items-start gap-3" testID="try-result">
+      <Icon name={ok ? 'passed' : 'failed'} tone={ok ? 'good' : 'danger'} />
+      <Body role="status" className="flex-1">
+        {detail}
+        {firmware === null ? '' : ` Firmware: ${firmware}.`}
+      </Body>
+    </Panel>
+  );
+}

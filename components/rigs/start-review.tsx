@@ -1,0 +1,131 @@
+import { useRouter, type Href } from 'expo-router';
+import { useState } from 'react';
+import { View } from 'react-native';
+import { serverNowIso, useLab, useLabMutation, useLabQuery, wordsOf } from '@/components/api';
+import { Body, Button, Label, Loading, Num, Panel, PressAndKeep, ProblemNotice, Section } from '@/components/ui';
+import { startChecks, type RigView } from '@/shared/contracts/rigs';
+import { startRun } from '@/shared/contracts/runs';
+import { formatDuration } from '@/shared/lib/format-duration';
+import { formatClock, zoneName } from '@/shared/lib/format-time';
+import { ArmSheet } from './arm-sheet';
+import { CheckList } from './check-list';
+import { useRefreshRigs } from './use-rig';
+
+export interface StartChoice {
+  protocolId: string;
+  protocolName: string;
+  revision: number;
+  massSetId: string;
+  notes: string;
+}
+
+/** The start checks, the review, and the act that makes masses move. Nothing here is ever sent twice or by itself. */
+export function StartReview({ rig, choice }: { rig: RigView; choice: StartChoice }) {
+  const { protocolId, revision } = choice;
+  const checks = useLabQuery(startChecks, { params: { rigId: rig.id }, query: { protocolId, revision }, everyMs: 3000, enabled: protocolId !== '' });
+  const data = checks.data?.data;
+  if (data === undefined) {
+    return checks.isError ? <ProblemNotice title="The start checks could not be made" {...wordsOf(checks.error)} action={{ label: 'Try again', onPress: () => void checks.refetch() }} /> : <Loading label="Making the start checks" />;
+  }
+  return (
+    <>
+      <Section title="Start checks">
+        <CheckList checks={data.checks} />
+        {rig.arm === null ? <ArmHere rig={rig} onArmed={() => void checks.refetch()} /> : null}
+      </Section>
+      <Section title="Review">
+        <Review rig={rig} choice={choice} durationS={data.durationS} finishAt={data.finishAt} firstMove={data.firstMove} />
+        <StartAct rig={rig} choice={choice} mayStart={data.mayStart} stale={checks.isError} />
+      </Section>
+    </>
+  );
+}
+
+function ArmHere({ rig, onArmed }: { rig: RigView; onArmed: () => void }) {
+  const [open, setOpen] = useState(false);
+  const close = () => {
+    setOpen(false);
+    onArmed();
+  };
+  return (
+    <>
+      <Button icon="key" label="Arm the rig" className="self-start" onPress={() => setOpen(true)} testID="arm-here" />
+      {open ? <ArmSheet rig={rig} onClose={close} /> : null}
+    </>
+  );
+}
+
+interface ReviewProps {
+  rig: RigView;
+  choice: StartChoice;
+  durationS: number;
+  finishAt: string;
+  firstMove: string;
+}
+
+function Review({ rig, choice, durationS, finishAt, firstMove }: ReviewProps) {
+  const { timeZone } = useLab();
+  const facts: readonly (readonly [string, string])[] = [
+    ['Rig', `${rig.name}, revision ${rig.revision}`],
+    ['Protocol', `${choice.protocolName}, revision ${choice.revision}`],
+    ['Mass set', rig.massSets.find(({ id }) => id === choice.massSetId)?.label ?? '–'],
+    ['First move', firstMove],
+    ['On site', rig.arm === null ? 'nobody: the rig is not armed' : `${rig.arm.name}${rig.arm.note === '' ? '' : `: “${rig.arm.note}”`}`],
+  ];
+  return (
+    <Panel className="gap-4">
+      <View className="flex-row flex-wrap items-end gap-x-8 gap-y-3">
+        <View>
+          <Label>Finish</Label>
+          <Num size={44} light testID="start-finish">
+            {formatClock(Date.parse(finishAt), { timeZone })}
+          </Num>
+          <Label>
+            {formatClock(Date.parse(finishAt), { timeZone, weekday: true }).split(' ')[1]}, {zoneName(timeZone)}
+          </Label>
+        </View>
+        <View>
+          <Label>Length</Label>
+          <Num size={24} light>
+            {formatDuration(durationS)}
+          </Num>
+        </View>
+      </View>
+      <View className="border-t border-line pt-2">
+        {facts.map(([label, words]) => (
+          <View key={label} className="flex-row gap-3 py-1.5">
+            <Label className="w-[84px] pt-0.5">{label}</Label>
+            <Body className="flex-1">{words}</Body>
+          </View>
+        ))}
+      </View>
+    </Panel>
+  );
+}
+
+interface StartActProps {
+  rig: RigView;
+  choice: StartChoice;
+  mayStart: boolean;
+  stale: boolean;
+}
+
+function StartAct({ rig, choice, mayStart, stale }: StartActProps) {
+  const router = useRouter();
+  const refresh = useRefreshRigs();
+  const start = useLabMutation(startRun, ({ data }) => {
+    refresh();
+    router.replace(`/runs/${data.id}` as Href);
+  });
+  const { protocolId, revision, massSetId, notes } = choice;
+  const send = () => start.mutate({ body: { rigId: rig.id, protocolId, revision, massSetId, notes, tappedAt: serverNowIso() } });
+  const ready = mayStart && massSetId !== '' && !stale;
+  return (
+    <View className="gap-3">
+      {start.isError ? <ProblemNotice title="The run was not started" {...wordsOf(start.error)} /> : null}
+      {ready ? null : <Body tone="dim">{stale ? 'The checks are old: the server does not answer. Nothing can be started until it does.' : 'Something above stands against a start. It may be started when every check passes.'}</Body>}
+      <PressAndKeep label="Start the run" icon="start" statement="I have read the review; the rig may move." onConfirm={send} disabled={!ready} busy={start.isPending} testID="start-run" />
+      <Label>Stop in this application is no emergency stop: the hard-wired one is at the rig.</Label>
+    </View>
+  );
+}
