@@ -1,13 +1,13 @@
 import { and, asc, eq, gt, isNull } from 'drizzle-orm';
 import { invitations, labs, users } from '@/db/schema';
 import type { Role } from '@/shared/contracts/roles';
-import type { Handle } from './database';
-import { one } from './database';
+import { one, type Handle } from './database';
 import { normalEmail } from './people';
 
 export interface Invitation {
   labId: string;
   labName: string;
+  timeZone: string;
   id: string;
   email: string;
   role: Role;
@@ -18,7 +18,7 @@ export interface Invitation {
 }
 
 const columns = {
-  labId: invitations.labId, labName: labs.name, id: invitations.id, email: invitations.email, role: invitations.role,
+  labId: invitations.labId, labName: labs.name, timeZone: labs.timeZone, id: invitations.id, email: invitations.email, role: invitations.role,
   invitedBy: users.name, createdAt: invitations.createdAt, expiresAt: invitations.expiresAt,
 };
 
@@ -43,6 +43,16 @@ export function openInvitations(db: Handle, labId: string, nowUtcMs: number): Pr
 export async function openInvitationByToken(db: Handle, tokenHash: string, nowUtcMs: number): Promise<Invitation | null> {
   const rows = await select(db).where(and(eq(invitations.tokenHash, tokenHash), open(nowUtcMs)));
   return rows[0] ?? null;
+}
+
+export async function openInvitationById(db: Handle, which: { labId: string; id: string; nowUtcMs: number }): Promise<Invitation | null> {
+  const rows = await select(db).where(and(eq(invitations.labId, which.labId), eq(invitations.id, which.id), open(which.nowUtcMs)));
+  return rows[0] ?? null;
+}
+
+/** The token that works from now on; an earlier one does not any more. */
+export async function setInvitationToken(db: Handle, invitation: { labId: string; id: string; tokenHash: string }): Promise<void> {
+  await db.update(invitations).set({ tokenHash: invitation.tokenHash }).where(and(eq(invitations.labId, invitation.labId), eq(invitations.id, invitation.id)));
 }
 
 /** Uses an invitation up; false when somebody else just did, or when it is not open any more. */

@@ -1,7 +1,7 @@
 import { and, asc, count, eq, gt, inArray } from 'drizzle-orm';
 import { labs, memberships, sessions, users } from '@/db/schema';
 import type { Role } from '@/shared/contracts/roles';
-import { isAlreadyThere, one, type Database, type Handle, type Transaction } from './database';
+import { one, type Database, type Handle, type Transaction } from './database';
 
 export type User = typeof users.$inferSelect;
 
@@ -68,13 +68,8 @@ export async function memberOf(db: Handle, labId: string, userId: string): Promi
 /** False when the account is a member already. */
 export async function addMember(db: Handle, member: { labId: string; userId: string; role: Role; nowUtcMs: number }): Promise<boolean> {
   const { nowUtcMs, ...fields } = member;
-  try {
-    await db.insert(memberships).values({ ...fields, since: nowUtcMs });
-    return true;
-  } catch (error) {
-    if (isAlreadyThere(error)) return false;
-    throw error;
-  }
+  const rows = await db.insert(memberships).values({ ...fields, since: nowUtcMs }).onConflictDoNothing().returning({ role: memberships.role });
+  return rows.length === 1;
 }
 
 export type MemberChange = 'done' | 'unknown' | 'last-owner';

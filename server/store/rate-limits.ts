@@ -1,4 +1,4 @@
-import { lte, sql } from 'drizzle-orm';
+import { eq, lte, sql } from 'drizzle-orm';
 import { rateLimits } from '@/db/schema';
 import { one, type Handle } from './database';
 
@@ -36,7 +36,12 @@ export async function countUse(db: Handle, rule: RateRule, use: { subject: strin
 
 /** Forgets what was counted, after a sign-in that succeeded. */
 export async function forgetUses(db: Handle, rule: RateRule, subject: string): Promise<void> {
-  await db.delete(rateLimits).where(sql`${rateLimits.bucket} = ${`${rule.name} ${subject}`}`);
+  await db.delete(rateLimits).where(eq(rateLimits.bucket, `${rule.name} ${subject}`));
+}
+
+/** Takes one use back, after a try that succeeded where only failures shall count. */
+export async function giveBackUse(db: Handle, rule: RateRule, subject: string): Promise<void> {
+  await db.update(rateLimits).set({ count: sql`greatest(0, ${rateLimits.count} - 1)` }).where(eq(rateLimits.bucket, `${rule.name} ${subject}`));
 }
 
 /** Removes counters whose window is over; returns how many. */

@@ -4,7 +4,7 @@ import type { ChainHead } from '@/shared/archive/chain';
 import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
 import type { RunState } from '@/shared/contracts/runs';
 import { StaleRunError, type RunStore, type RunWrite, type StoredRun } from '../interfaces/run-store';
-import { isAlreadyThere, type Database, type Handle, type Transaction } from './database';
+import type { Database, Handle, Transaction } from './database';
 
 /** Rows of one INSERT: PostgreSQL takes at most 65 535 parameters a statement. */
 const rowsAtOnce = 2000;
@@ -21,22 +21,24 @@ export interface NewRun {
 
 /**
  * Adds a run before its first motion; a rehearsal is one with `start.simulated`.
- * @returns false when another run of the rig has not ended (nothing is written then; inside a transaction it is over)
+ * @returns false when another run of the rig has not ended; nothing is written then
  */
 export async function insertRun(db: Handle, run: NewRun): Promise<boolean> {
   const { start } = run;
-  try {
-    await db.insert(runs).values({
+  const rows = await db
+    .insert(runs)
+    .values({
       labId: start.labId, id: start.runId, rigId: start.rigId, rigRevision: start.rigRevision, protocolId: run.protocolId, massSetId: run.massSetId,
       rehearsal: start.simulated !== null, start, state: run.state, createdAt: run.nowUtcMs, predictedEndAt: run.predictedEndUtcMs,
       rigName: start.rigName, protocolName: start.protocolName, protocolRevision: start.protocolRevision, massSetLabel: start.massSetLabel, operator: start.operator,
-    });
-    return true;
-  } catch (error) {
-    if (isAlreadyThere(error, 'runs_one_per_rig')) return false;
-    throw error;
-  }
+    })
+    .onConflictDoNothing({ target: [runs.labId, runs.rigId], where: oneRunPerRig })
+    .returning({ id: runs.id });
+  return rows.length === 1;
 }
+
+/** The condition of the partial unique index `runs_one_per_rig`. */
+const oneRunPerRig = sql`not rehearsal and state not in ('finished', 'stopped', 'failed')`;
 
 /** Runs in PostgreSQL. One commit is one transaction; the chain's end in `runs` is the fence against a second writer. */
 export function createRunStore(db: Database): RunStore {
