@@ -1,6 +1,6 @@
 /** Three projects: pure code and server in Node, components in a DOM, the product in a real browser. */
 const alias = { '^@/(.*)$': '<rootDir>/$1' };
-const untransformed = ['/node_modules/(?!(lucia|@lucia-auth|@oslojs|pure-rand|fflate)/)'];
+const untransformed = ['/node_modules/(?!(lucia|@lucia-auth|@oslojs|pure-rand|fflate|temporal-polyfill|temporal-utils)/)'];
 const node = {
   testEnvironment: 'node',
   transform: { '\\.[jt]sx?$': ['babel-jest', { configFile: false, presets: ['@babel/preset-typescript'], plugins: ['@babel/plugin-transform-modules-commonjs'] }] },

@@ -1,0 +1,116 @@
+import type { RunStart, StepOutcome, StepRow } from '@/shared/archive/run-records';
+import type { Instant } from '../interfaces/clock';
+import type { LinkCommand } from '../interfaces/turntable-link';
+import type { ActiveStep, Effect, Happening, KnownController, NoticeTopic, Reason, RunContext, RunEvent } from './run-context';
+
+/** What one transition gives out besides the new context. */
+export interface Output {
+  steps: StepRow[];
+  events: Happening[];
+  effects: Effect[];
+}
+
+export const nothingOut: Output = { steps: [], events: [], effects: [] };
+
+export interface RowEnd {
+  at: Instant;
+  angleDeg: number | null;
+  outcome: StepOutcome;
+}
+
+/**
+ * A working copy of the context in which one action of the chart writes; what it was made from stays as it was, so the
+ * chart as a whole is a pure function.
+ */
+export class Draft {
+  readonly context: RunContext;
+  readonly out: Output;
+
+  constructor(
+    readonly start: RunStart,
+    readonly event: RunEvent,
+    from: { context: RunContext; out: Output },
+  ) {
+    this.context = structuredClone(from.context);
+    this.out = { steps: [...from.out.steps], events: [...from.out.events], effects: [...from.out.effects] };
+  }
+
+  get nowUtcMs(): number {
+    return this.event.at.utcMs;
+  }
+
+  /** The controller's own stamp where the event carries one, else the server's. */
+  get stamp(): Instant {
+    return 'link' in this.event ? this.event.link.at : this.event.at;
+  }
+
+  /** The controller as last heard of; the run never gets beyond `starting` without one. */
+  get controller(): KnownController {
+    const known = this.context.controller;
+    if (known === null) throw new Error('the run went on before a controller had answered');
+    return known;
+  }
+
+  log(kind: string, data: Record<string, unknown> = {}, at: Instant = this.stamp): void {
+    this.out.events.push({ at, kind, data });
+  }
+
+  command(make: (id: string) => LinkCommand): string {
+    const id = this.nextId();
+    this.out.effects.push({ kind: 'link', id, command: make(id) });
+    return id;
+  }
+
+  notify(topic: NoticeTopic, text: string): void {
+    this.out.effects.push({ kind: 'notify', id: this.nextId(), topic, text });
+  }
+
+  voidArm(reason: string): void {
+    this.context.armVoid = reason;
+    this.out.effects.push({ kind: 'void-arm', id: this.nextId(), reason });
+  }
+
+  /** Takes up a row that was begun or changed, so that the transition saves it. */
+  saveRow(row: StepRow): void {
+    const others = this.out.steps.filter(({ seq }) => seq !== row.seq);
+    this.out.steps = [...others, structuredClone(row)].sort((a, b) => a.seq - b.seq);
+  }
+
+  /** Makes `step` the present one and opens its row, whose sequence number is given here. */
+  openStep(step: ActiveStep): void {
+    this.context.rowCount += 1;
+    step.row.seq = this.context.rowCount;
+    this.context.step = step;
+    this.saveRow(step.row);
+    const { seq, path, kind, label, station, startUtcMs, uStartS } = step.row;
+    this.log('step-began', { seq, path, kind, label, station }, { utcMs: startUtcMs, uS: uStartS });
+  }
+
+  /** Closes the row of the present step; the step itself stays, so that a hold can be resumed. */
+  closeRow({ at, angleDeg, outcome }: RowEnd): void {
+    const { step } = this.context;
+    if (step === null || step.row.outcome !== null) return;
+    Object.assign(step.row, { endUtcMs: at.utcMs, uEndS: at.uS, angleEndDeg: angleDeg, outcome });
+    if (step.row.kind === 'dwell') step.row.good = true;
+    if (step.row.kind === 'dwell' && outcome === 'done') this.context.dwellsDone += 1;
+    step.broken = outcome === 'cut short';
+    this.saveRow(step.row);
+    this.log('step-ended', { seq: step.row.seq, path: step.row.path, outcome, angleDeg }, at);
+  }
+
+  /** The sources stand at `angleDeg` since `at`: the next step begins there and then. */
+  standAt(at: Instant, angleDeg: number): void {
+    this.context.moment = { ...at, angleDeg };
+  }
+
+  because(code: string, text: string): Reason {
+    const reason = { code, text };
+    this.context.reason = reason;
+    return reason;
+  }
+
+  private nextId(): string {
+    this.context.commandCount += 1;
+    return `${this.start.runId}-${this.context.commandCount}`;
+  }
+}

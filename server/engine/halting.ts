@@ -1,0 +1,302 @@
+import type { Instant } from '../interfaces/clock';
+import { startRun } from './beginning';
+import type { Draft } from './draft';
+import type { InterruptionCause, KnownController, RunEvent } from './run-context';
+import { predictEndUtcMs } from './predicted-end';
+import { beginHome, beginStanding, beginSwing, chooseNext, finishMotion, reachedTarget, standingEndUtcMs, toleranceDeg } from './steps';
+import { CONFIRM_MS, GAP_LIMIT_MS, LEAD_MS } from './timing';
+
+/** How a run comes to rest and how it goes on: holds, stops, interruptions, resuming. */
+
+/** Events after which a run never goes on without a person, and what they mean for people. */
+const grave = {
+  'controller-reset': 'The controller restarted and has lost its position. Somebody has to be at the rig: home it and arm it again in a new run.',
+  interlock: 'The interlock was opened. Close it and arm the rig again on site, then resume.',
+  supply: 'The motor supply was lost, and with it the position. Somebody has to be at the rig: home it and arm it again in a new run.',
+  limit: 'A motion met a travel limit. Somebody has to look at the rig before it moves again.',
+} as const;
+export type GraveCause = keyof typeof grave;
+
+const interruptions: Record<InterruptionCause, string> = {
+  'link-lost': 'The link to the controller was lost.',
+  'server-restarted': 'The server restarted.',
+  'lease-lapsed': 'The controller had no renewal of the motion lease for 2 s and ended the motion.',
+  'database-away': 'The database was away for more than 4 s.',
+};
+
+/** Ends all motion; the chart waits in `holding` for the controller's word. */
+export function beginHold(draft: Draft): void {
+  const acted = draft.event.type === 'hold' ? draft.event.acted : null;
+  halt(draft, acted ?? draft.command((id) => ({ kind: 'hold', id })));
+}
+
+export function beginStop(draft: Draft): void {
+  const acted = draft.event.type === 'stop' ? draft.event.acted : null;
+  halt(draft, acted ?? draft.command((id) => ({ kind: 'stop', id, releaseDrivers: draft.start.rig.motion?.safeWhenFree === true })));
+}
+
+function halt(draft: Draft, commandId: string): void {
+  const { context } = draft;
+  context.haltedAtUtcMs ??= draft.nowUtcMs;
+  context.deadlineUtcMs = draft.nowUtcMs + CONFIRM_MS;
+  if (context.intervention !== null && context.intervention.confirmedAtUtcMs === null) context.intervention.commandId = commandId;
+}
+
+/** A person's hold: logged with the name before anything else. */
+export function requestHold(draft: Draft): void {
+  if (draft.event.type !== 'hold') return;
+  const { by } = draft.event;
+  draft.log('hold-requested', { by });
+  draft.because('held-by-person', `${by} asked to hold.`);
+  draft.context.intervention = { kind: 'hold', by, serverAtUtcMs: draft.nowUtcMs, confirmedAtUtcMs: null, commandId: null };
+  beginHold(draft);
+}
+
+export function requestStop(draft: Draft): void {
+  if (draft.event.type !== 'stop') return;
+  const { by } = draft.event;
+  draft.log('stop-requested', { by });
+  draft.because('stopped-by-person', `${by} stopped the run.`);
+  draft.context.intervention = { kind: 'stop', by, serverAtUtcMs: draft.nowUtcMs, confirmedAtUtcMs: null, commandId: null };
+  beginStop(draft);
+}
+
+/** `Hold after this dwell`: a move that already waits in the controller is cancelled, the dwell goes on to its end. */
+export function requestHoldAfterDwell(draft: Draft): void {
+  if (draft.event.type !== 'hold-after-dwell') return;
+  const { by } = draft.event;
+  const { context } = draft;
+  draft.log('hold-after-dwell-requested', { by });
+  context.holdAfterStep = by;
+  context.intervention = { kind: 'hold-after-dwell', by, serverAtUtcMs: draft.nowUtcMs, confirmedAtUtcMs: null, commandId: null };
+  if (context.ahead === null || context.ahead.cancelled || context.step === null) return;
+  context.intervention.commandId = draft.command((id) => ({ kind: 'hold', id }));
+  context.ahead.cancelled = true;
+  context.deadlineUtcMs = standingEndUtcMs(context.step);
+}
+
+/** Takes down what interrupted the run, and why it is held or stopped if the protocol does not let it resume. */
+export function noteInterruption(draft: Draft): void {
+  const { event, context } = draft;
+  const cause = causeOf(event);
+  if (cause === null) return;
+  const sinceUtcMs = event.type === 'server-restarted' ? event.aliveUtcMs : event.type === 'database-away' ? event.sinceUtcMs : draft.stamp.utcMs;
+  noteRestart(draft);
+  if (event.type === 'database-away') draft.log('database-away', { gapS: (draft.nowUtcMs - sinceUtcMs) / 1000 });
+  const before = context.interruption;
+  context.interruption = { cause, sinceUtcMs: Math.min(before?.sinceUtcMs ?? sinceUtcMs, sinceUtcMs) };
+  draft.because(cause, interruptions[cause]);
+}
+
+/** A process that has just started knows nothing of the line yet. */
+export function noteRestart(draft: Draft): void {
+  const { event, context } = draft;
+  if (event.type !== 'server-restarted') return;
+  draft.log('server-restarted', { gapS: (draft.nowUtcMs - event.aliveUtcMs) / 1000 });
+  context.linkUp = false;
+  context.linkDownSinceUtcMs ??= event.aliveUtcMs;
+}
+
+function causeOf(event: RunEvent): InterruptionCause | null {
+  if (event.type === 'link.lost') return 'link-lost';
+  if (event.type === 'link.lease-lapsed' || event.type === 'link.motion-ended') return 'lease-lapsed';
+  return event.type === 'server-restarted' || event.type === 'database-away' ? event.type : null;
+}
+
+/** Under `resume`: waits for the line, then for standstill; a hold makes both sure and cancels what may still wait. */
+export function awaitReturn(draft: Draft): void {
+  const { context } = draft;
+  if (context.linkUp) draft.command((id) => ({ kind: 'hold', id }));
+  context.deadlineUtcMs = (context.interruption?.sinceUtcMs ?? draft.nowUtcMs) + GAP_LIMIT_MS;
+}
+
+/** Why an interrupted run may not go on by itself; null where it may. */
+export function returnRefusal(draft: Draft): string | null {
+  const { context } = draft;
+  const gapMs = draft.nowUtcMs - (context.interruption?.sinceUtcMs ?? draft.nowUtcMs);
+  if (gapMs > GAP_LIMIT_MS) return 'It lasted more than 10 min.';
+  return motionRefusal(draft, draft.start.simulated === null ? context.arm : 'simulated', context.armVoid);
+}
+
+type ArmGiven = { name: string; untilUtcMs: number } | 'simulated' | null;
+
+/** What stands between a run at rest and its next motion, in a sentence; null where nothing does. */
+export function motionRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string | null {
+  const { context } = draft;
+  const known = context.controller;
+  if (!context.linkUp || known === null) return 'The link to the controller is down; wait until it is ready.';
+  if (!known.interlockClosed) return 'The interlock is open; close it first.';
+  if (!known.supplyPresent) return 'The motor supply is off; switch it on at the rig.';
+  if (!known.positionKnown && context.step?.row.kind !== 'home') return 'The controller does not know its position, so this run cannot go on. Stop it, and home the rig in a new run.';
+  return elsewhereRefusal(draft, known) ?? armRefusal(draft, arm, armVoid);
+}
+
+function elsewhereRefusal(draft: Draft, known: KnownController): string | null {
+  const { step, moment } = draft.context;
+  if (step === null || step.motion !== null || known.angleDeg === null) return null;
+  if (Math.abs(known.angleDeg - moment.angleDeg) <= toleranceDeg(draft)) return null;
+  return `The sources stand at ${known.angleDeg.toFixed(2)} deg, not at ${moment.angleDeg.toFixed(2)} deg where this step measures. Stop this run and start a new one.`;
+}
+
+function armRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string | null {
+  if (arm === 'simulated') return null;
+  if (arm === null || armVoid !== null) return `The rig is not armed${armVoid === null ? '' : `: ${armVoid}`}. A named person has to arm it on site first.`;
+  const endUtcMs = predictEndUtcMs(draft.start, draft.context, { nowUtcMs: draft.nowUtcMs });
+  if (arm.untilUtcMs > endUtcMs) return null;
+  return `The arm of ${arm.name} ends at ${iso(arm.untilUtcMs)}, before the predicted finish at ${iso(endUtcMs)}. Arm the rig until after that.`;
+}
+
+const iso = (utcMs: number) => new Date(utcMs).toISOString();
+
+/** The protocol lets the interrupted run go on: what was standing goes on standing, a broken move is finished first. */
+export function carryOn(draft: Draft): void {
+  const { context } = draft;
+  const { interruption, step } = context;
+  draft.log('resumed', { by: 'protocol', cause: interruption?.cause ?? null, gapS: (draft.nowUtcMs - (interruption?.sinceUtcMs ?? draft.nowUtcMs)) / 1000 });
+  context.interruption = null;
+  context.reason = null;
+  context.ahead = null;
+  if (step === null) return resumeStep(draft);
+  if (step.motion === null) {
+    context.deadlineUtcMs = Math.max(draft.nowUtcMs, standingEndUtcMs(step) - LEAD_MS);
+    context.next = 'standing';
+    return;
+  }
+  closeForRest(draft);
+  if (context.step === null) return chooseNext(draft);
+  resumeStep(draft);
+}
+
+/** Why a person's resume is refused; null where it may go on. */
+export function resumeRefusal(draft: Draft): string | null {
+  if (draft.event.type !== 'resume') return null;
+  return motionRefusal(draft, draft.start.simulated === null ? draft.event.arm : 'simulated', null);
+}
+
+export function noteRefusedResume(draft: Draft): void {
+  if (draft.event.type !== 'resume') return;
+  draft.log('resume-refused', { by: draft.event.by, why: resumeRefusal(draft) });
+}
+
+export function resume(draft: Draft): void {
+  if (draft.event.type !== 'resume') return;
+  const { by, arm } = draft.event;
+  const { context } = draft;
+  Object.assign(context, { arm, armVoid: null, holdAfterStep: null, interruption: null, reason: null, haltedAtUtcMs: null });
+  context.intervention = { kind: 'resume', by, serverAtUtcMs: draft.nowUtcMs, confirmedAtUtcMs: null, commandId: null };
+  draft.log('resumed', { by, arm });
+  draft.notify('resumed', `${by} resumed the run.`);
+  resumeStep(draft);
+  if (context.next === 'standing') context.intervention.confirmedAtUtcMs = draft.nowUtcMs;
+}
+
+/** From rest, here and now: the step left unfinished, or else the next one. The cadence starts anew. */
+function resumeStep(draft: Draft): void {
+  const { context } = draft;
+  const { step } = context;
+  draft.standAt(draft.event.at, draft.controller.angleDeg ?? context.moment.angleDeg);
+  context.ahead = null;
+  context.moveRetries = 0;
+  if (context.startedAtUtcMs === null) return startRun(draft);
+  if (step === null || !step.broken) return chooseNext(draft);
+  if (step.row.kind === 'home') return beginHome(draft, step.item);
+  if (step.motion === null) return beginStanding(draft, step.item, step.plannedMs);
+  beginSwing(draft, { item: step.item, late: true });
+}
+
+/** The turntable stands still: the open row is closed with what is known of its end. */
+export function closeForRest(draft: Draft): void {
+  const { context } = draft;
+  const { step } = context;
+  if (step === null || step.row.outcome !== null) return;
+  const angleDeg = draft.controller.positionKnown ? draft.controller.angleDeg : null;
+  if (step.motion === null) return closeStanding(draft, angleDeg);
+  step.row.angleEndDeg ??= angleDeg;
+  if (reachedTarget(draft)) {
+    step.row.endUtcMs ??= Math.min(draft.nowUtcMs, step.row.startUtcMs + step.motion.durationMs);
+    finishMotion(draft);
+    context.step = null;
+    return;
+  }
+  const at: Instant = { utcMs: step.row.endUtcMs ?? draft.stamp.utcMs, uS: step.row.uEndS ?? restU(draft) };
+  step.row.station = '';
+  draft.closeRow({ at, angleDeg: step.row.angleEndDeg, outcome: 'cut short' });
+}
+
+function closeStanding(draft: Draft, angleDeg: number | null): void {
+  const { context } = draft;
+  if (context.step === null) return;
+  const endUtcMs = standingEndUtcMs(context.step);
+  const haltedAtUtcMs = context.haltedAtUtcMs ?? draft.nowUtcMs;
+  const over = haltedAtUtcMs >= endUtcMs;
+  const at: Instant = { utcMs: over ? endUtcMs : haltedAtUtcMs, uS: context.uPlanS };
+  draft.closeRow({ at, angleDeg: angleDeg ?? context.step.row.angleStartDeg, outcome: over ? 'done' : 'cut short' });
+  if (over) context.step = null;
+}
+
+/** A motion whose end nobody saw ended somewhere between its beginning and now: rectangular, s. */
+function restU(draft: Draft): number {
+  const since = draft.context.step?.row.startUtcMs ?? draft.nowUtcMs;
+  return Math.abs(draft.nowUtcMs - since) / 1000 / Math.sqrt(12);
+}
+
+/** The controller's own word, or the lack of it, ends the waiting in `holding`. */
+export function becomeHeld(draft: Draft): void {
+  const { context } = draft;
+  confirm(draft);
+  closeForRest(draft);
+  context.ahead = null;
+  Object.assign(context, { holdAfterStep: null, haltedAtUtcMs: null, deadlineUtcMs: null, interruption: null });
+  const { code = 'held', text = '' } = context.reason ?? {};
+  draft.log('held', { code, reason: text, confirmed: draft.event.type !== 'deadline' });
+  draft.notify('held', text);
+}
+
+export function becomeStopped(draft: Draft): void {
+  const { context } = draft;
+  confirm(draft);
+  closeForRest(draft);
+  end(draft, draft.event.at.utcMs);
+  const { code = 'stopped', text = '' } = context.reason ?? {};
+  draft.log('stopped', { code, reason: text, confirmed: draft.event.type !== 'deadline' });
+  draft.voidArm('the run was stopped');
+  draft.notify('stopped', text);
+}
+
+function confirm(draft: Draft): void {
+  const { intervention } = draft.context;
+  if (draft.event.type === 'deadline' || intervention === null) return;
+  intervention.confirmedAtUtcMs ??= draft.stamp.utcMs;
+}
+
+export function becomeFinished(draft: Draft): void {
+  const { context, start } = draft;
+  const { moment } = context;
+  const release = start.protocol.atEnd?.drivers === 'release';
+  if (release) draft.command((id) => ({ kind: 'stop', id, releaseDrivers: true }));
+  end(draft, moment.utcMs);
+  draft.log('finished', { dwells: context.dwellsDone, drivers: release ? 'release' : 'keep' }, moment);
+  draft.notify('finished', 'The run finished as planned.');
+}
+
+/** Nothing is left moving: a stop goes out with the failure. */
+export function becomeFailed(draft: Draft): void {
+  const { context } = draft;
+  const { code = 'failed', text = 'The run failed.' } = context.reason ?? {};
+  const { step } = context;
+  if (step !== null) draft.closeRow({ at: draft.stamp, angleDeg: context.controller?.angleDeg ?? null, outcome: 'failed' });
+  draft.command((id) => ({ kind: 'stop', id, releaseDrivers: false }));
+  end(draft, draft.nowUtcMs);
+  draft.log('failed', { code, reason: text });
+  draft.notify('failed', text);
+}
+
+function end(draft: Draft, utcMs: number): void {
+  Object.assign(draft.context, { endedAtUtcMs: utcMs, deadlineUtcMs: null, ahead: null, haltedAtUtcMs: null });
+}
+
+/** Interlock, supply, reset or limit: the arm is void (but for a limit), and only a person may go on. */
+export function noteGrave(draft: Draft, cause: GraveCause): void {
+  draft.because(cause, grave[cause]);
+  if (cause !== 'limit') draft.voidArm(grave[cause].split('.')[0]?.toLowerCase() ?? cause);
+}

@@ -1,0 +1,31 @@
+import type { RunStart } from '@/shared/archive/run-records';
+import { advanceCursor } from '@/shared/protocol/cursor';
+import { stateAfterIfPossible } from '@/shared/protocol/step-effect';
+import type { RunContext } from './run-context';
+
+export interface PredictionInput {
+  nowUtcMs: number;
+  /** Told of each step to come and when it would begin. */
+  eachStep?: (path: string, startUtcMs: number) => void;
+}
+
+/** When the run would finish if it went on from here without another hitch, UTC ms. */
+export function predictEndUtcMs(start: RunStart, context: RunContext, { nowUtcMs, eachStep }: PredictionInput): number {
+  let { cursor } = context;
+  let state = afterPresentStep(context, nowUtcMs);
+  for (;;) {
+    const next = advanceCursor(start, cursor, state);
+    if (next.item === null) return state.utcMs;
+    cursor = next.cursor;
+    eachStep?.(next.item.path, state.utcMs);
+    state = stateAfterIfPossible(next.item.step, start, state);
+  }
+}
+
+function afterPresentStep({ step, moment, swingStartUtcMs }: RunContext, nowUtcMs: number) {
+  if (step === null) return { utcMs: Math.max(moment.utcMs, nowUtcMs), angleDeg: moment.angleDeg, swingStartUtcMs: null };
+  const { row, motion, broken, plannedMs } = step;
+  const lengthMs = plannedMs ?? (row.plannedEndUtcMs ?? row.startUtcMs) - row.plannedStartUtcMs;
+  const endUtcMs = broken ? nowUtcMs + lengthMs : Math.max(row.startUtcMs + lengthMs, nowUtcMs);
+  return { utcMs: endUtcMs, angleDeg: motion?.targetDeg ?? moment.angleDeg, swingStartUtcMs: motion === null ? null : broken ? nowUtcMs : (swingStartUtcMs ?? row.startUtcMs) };
+}

@@ -1,0 +1,183 @@
+import type { CursorState, PlannedItem } from '@/shared/protocol/cursor';
+import type { StepRow } from '@/shared/archive/run-records';
+import type { ControllerState, LinkCommand, LinkEvent } from '../interfaces/turntable-link';
+import type { Instant } from '../interfaces/clock';
+
+/**
+ * What a run remembers between two events, what it may be told and what it asks for. All of it is plain data: the
+ * context is stored as JSON after every transition and is everything a restarted server has to go on.
+ */
+
+/** Raised whenever the shape or meaning of the stored context changes; other versions are quarantined. */
+export const CHART_VERSION = 1;
+
+export type ChartState = 'starting' | 'choosing' | 'homing' | 'moving' | 'standing' | 'interrupted' | 'holding' | 'held' | 'stopping' | 'stopped' | 'finished' | 'failed';
+
+export interface Arm {
+  /** The person on site who answers for the rig. */
+  name: string;
+  untilUtcMs: number;
+}
+
+/** A motion that was asked of the controller. */
+export interface Motion {
+  commandId: string;
+  /** Absolute turntable angle, deg; null while homing. */
+  targetDeg: number | null;
+  /** When the controller was asked to begin; null: at once. */
+  startUtcMs: number | null;
+  /** How long the profile takes, ms. */
+  durationMs: number;
+  /** It comes after its time: after a hold or an interruption, or begun late. */
+  late: boolean;
+  /** The controller said so. */
+  began: boolean;
+  ended: boolean;
+}
+
+/** The step that is being executed, or that a hold has left unfinished. */
+export interface ActiveStep {
+  item: PlannedItem;
+  row: StepRow;
+  /** Length first planned, ms; null where the step ends by an event. */
+  plannedMs: number | null;
+  motion: Motion | null;
+  /** The row was closed before the step was done (hold, interruption); resuming begins it anew or finishes the move. */
+  broken: boolean;
+}
+
+/** A move that was sent to the controller while the dwell before it still lasts. */
+export interface MoveAhead {
+  commandId: string;
+  targetDeg: number;
+  startUtcMs: number;
+  /** Cancelled by `hold after this dwell`: should it have begun all the same, the run holds. */
+  cancelled: boolean;
+}
+
+export type InterruptionCause = 'link-lost' | 'server-restarted' | 'lease-lapsed' | 'database-away';
+
+export interface Interruption {
+  cause: InterruptionCause;
+  /** The last instant at which all was known to be well. */
+  sinceUtcMs: number;
+}
+
+export type InterventionKind = 'hold' | 'hold-after-dwell' | 'resume' | 'stop';
+
+export interface Intervention {
+  kind: InterventionKind;
+  by: string;
+  serverAtUtcMs: number;
+  /** When the controller itself said that the turntable stands still; null until then. */
+  confirmedAtUtcMs: number | null;
+  /** Command whose standstill confirms it. */
+  commandId: string | null;
+}
+
+/** Why a run is held or failed, in words for people, with a code for programs. */
+export interface Reason {
+  code: string;
+  text: string;
+}
+
+/** What the engine last heard of the controller. */
+export interface KnownController {
+  bootId: string;
+  positionKnown: boolean;
+  angleDeg: number | null;
+  moving: boolean;
+  interlockClosed: boolean;
+  supplyPresent: boolean;
+}
+
+export interface RunContext {
+  cursor: CursorState;
+  rowCount: number;
+  commandCount: number;
+  dwellsDone: number;
+  startedAtUtcMs: number | null;
+  endedAtUtcMs: number | null;
+  arm: Arm | null;
+  /** Why the arm no longer holds; null while it does. */
+  armVoid: string | null;
+  controller: KnownController | null;
+  linkUp: boolean;
+  /** Since when the link is down; null while it is up. */
+  linkDownSinceUtcMs: number | null;
+  /** Standard uncertainty of instants taken from the plan, s: that of the last controller stamp. */
+  uPlanS: number;
+  step: ActiveStep | null;
+  ahead: MoveAhead | null;
+  /** How often the controller refused or cancelled the move now due. */
+  moveRetries: number;
+  /** Where and when the step before the present one ended: the start of the next. */
+  moment: Instant & { angleDeg: number };
+  /** The present step began at the planned end of a dwell, settle or wait: a swing now is timed, and `late` if it begins later. */
+  onCadence: boolean;
+  /** Start of the swing before, from which a beat is counted; null when no swing came before or it was broken. */
+  swingStartUtcMs: number | null;
+  /** Set by `hold after this dwell`. */
+  holdAfterStep: string | null;
+  intervention: Intervention | null;
+  interruption: Interruption | null;
+  /** When the hold or stop that is being carried out came. */
+  haltedAtUtcMs: number | null;
+  reason: Reason | null;
+  /** UTC ms at which the driver is to send `deadline`; null: nothing is awaited by time. */
+  deadlineUtcMs: number | null;
+  /** Set while the chart chooses what comes next. */
+  next: 'homing' | 'moving' | 'standing' | 'holding' | 'finished' | 'failed' | null;
+}
+
+/** Stored form of a run between two events. */
+export interface RunSnapshot {
+  version: number;
+  state: ChartState;
+  context: RunContext;
+}
+
+type Told<T extends string, P = unknown> = { type: T; /** the server's clock when it took the event up */ at: Instant } & P;
+
+type LinkEventOf<K extends LinkEvent['kind']> = Extract<LinkEvent, { kind: K }>;
+export type LinkTold = { [K in LinkEvent['kind']]: Told<`link.${K}`, { link: LinkEventOf<K> }> }[LinkEvent['kind']];
+
+export type RunEvent =
+  | LinkTold
+  | Told<'begin', { controller: ControllerState | null }>
+  | Told<'deadline'>
+  /** `acted`: id of the command that already went to the controller. */
+  | Told<'hold', { by: string; acted: string | null }>
+  | Told<'stop', { by: string; acted: string | null }>
+  | Told<'hold-after-dwell', { by: string }>
+  | Told<'resume', { by: string; arm: Arm | null }>
+  | Told<'server-restarted', { aliveUtcMs: number }>
+  | Told<'database-away', { sinceUtcMs: number }>
+  /** A motion that was saved but, because a hold or stop overtook it, never sent. */
+  | Told<'not-sent', { commandId: string }>;
+
+export type RunEventType = RunEvent['type'];
+export type RunEventOf<T extends RunEventType> = Extract<RunEvent, { type: T }>;
+
+export type NoticeTopic = 'started' | 'held' | 'resumed' | 'stopped' | 'failed' | 'finished';
+
+/** What is to be done after the transition is saved; every effect has an id that makes a repeat harmless. */
+export type Effect =
+  | { kind: 'link'; id: string; command: LinkCommand }
+  | { kind: 'void-arm'; id: string; reason: string }
+  | { kind: 'notify'; id: string; topic: NoticeTopic; text: string };
+
+/** An event of the chain before it is chained. */
+export interface Happening {
+  at: Instant;
+  kind: string;
+  data: Record<string, unknown>;
+}
+
+export interface Advance {
+  snapshot: RunSnapshot;
+  /** Rows that are new or changed, whole. */
+  steps: StepRow[];
+  events: Happening[];
+  effects: Effect[];
+}

@@ -1,0 +1,390 @@
+import { appendEvent, type ChainHead, emptyChain, type Sha256 } from '@/shared/archive/chain';
+import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
+import type { Cancel, Clock, Instant } from '../interfaces/clock';
+import { type RunStore, StaleRunError, type StoredRun } from '../interfaces/run-store';
+import type { LinkEvent, TurntableLink } from '../interfaces/turntable-link';
+import { advance, beginRun, deadlineOf, isRunOver, wantsMotion } from './chart';
+import { type Advance, type Arm, CHART_VERSION, type Effect, type Happening, type RunEvent, type RunSnapshot } from './run-context';
+import { createPredictor, factsOf, mayResume, plannedDwells, type RunFacts, summaryOf } from './run-facts';
+import { DATABASE_GRACE_MS, RunSaver } from './run-saver';
+
+export interface RunDriverParts {
+  start: RunStart;
+  /** What the store holds of a run that is taken up again; null for a new one. */
+  stored: StoredRun | null;
+  store: RunStore;
+  /** Opened and kept by its owner; the driver listens and sends. */
+  link: TurntableLink;
+  clock: Clock;
+  sha256: Sha256;
+  /** The arm of the rig now; null when nobody answers for it. */
+  armNow(): Arm | null;
+  /** Notifications and the end of the arm, performed after they were saved. */
+  perform(effect: Exclude<Effect, { kind: 'link' }>): void;
+}
+
+/** What one saved transition changed. */
+export interface RunChange {
+  facts: RunFacts;
+  steps: StepRow[];
+  events: ChainedEvent[];
+}
+
+export type Answer = { ok: true; serverAtUtcMs: number } | { ok: false; why: string };
+
+/** Snapshot as stored: with the instant until which the process is known to have lived. */
+export interface StoredSnapshot extends RunSnapshot {
+  aliveUtcMs: number;
+}
+
+type Item = { event: RunEvent; done?: (result: Advance | null) => void } | 'beat' | 'alive';
+
+/** The loop says that it lives twice a second while something may move, and every 30 s in the database. */
+const BEAT_MS = 500;
+const LONGEST_BEAT_MS = 1500;
+const ALIVE_MS = 30_000;
+/** A wall clock may step: a far deadline is looked at again at least this often. */
+const LONGEST_WAIT_MS = 60_000;
+
+/**
+ * Drives one run: takes one event at a time through the chart, saves what came of it in one transaction, then performs the
+ * effects. Hold and stop go to the controller before anything else.
+ */
+export class RunDriver {
+  readonly runId: string;
+  private snapshot: RunSnapshot;
+  private chain: ChainHead;
+  private readonly inbox: Item[] = [];
+  private pumping = false;
+  private closed = false;
+  private stale = false;
+  private databaseAwaySinceUtcMs: number | null = null;
+  /** Holds and stops that were acted on and are not yet through the chart: until then nothing is set in motion. */
+  private halting = 0;
+  private acted = 0;
+  private lastBeatMs = -Infinity;
+  private savedMs: number;
+  private readonly timers: Partial<Record<'deadline' | 'beat' | 'alive', Cancel>> = {};
+  private readonly saver: RunSaver;
+  private readonly listeners = new Set<(change: RunChange) => void>();
+  private readonly waiting: (() => void)[] = [];
+  private readonly predict: (snapshot: RunSnapshot, nowUtcMs: number) => number | null;
+  private readonly unsubscribe: () => void;
+  private dwellsPlanned: number | null = null;
+
+  constructor(private readonly parts: RunDriverParts) {
+    const { start, stored, clock, link, store } = parts;
+    this.runId = start.runId;
+    this.snapshot = stored?.snapshot == null ? beginRun(start, clock.utcMs()) : snapshotIn(stored);
+    this.chain = stored?.chain ?? emptyChain;
+    this.savedMs = clock.monotonicMs();
+    this.predict = createPredictor(start);
+    this.saver = new RunSaver({ store, clock, onAway: (sinceUtcMs) => this.databaseIsAway(sinceUtcMs) });
+    this.unsubscribe = link.subscribe((event) => this.heard(event));
+    link.setLeaseRule(() => this.mayRenewLease());
+  }
+
+  /** Begins a new run: at once where the link is ready, else as soon as it is. */
+  start(): void {
+    const { link } = this.parts;
+    const controller = link.health().condition === 'ready' ? link.controller() : null;
+    this.enqueue({ event: { type: 'begin', at: this.now(), controller } });
+    this.scheduleAlive();
+  }
+
+  /** Takes up a run that another process left unfinished. */
+  recover(): void {
+    const { link, stored, clock } = this.parts;
+    const aliveUtcMs = (stored?.snapshot as StoredSnapshot | null | undefined)?.aliveUtcMs ?? clock.utcMs();
+    this.enqueue({ event: { type: 'server-restarted', at: this.now(), aliveUtcMs } });
+    const controller = link.health().condition === 'ready' ? link.controller() : null;
+    if (controller !== null) this.heard({ kind: 'ready', at: this.now(), controller, sameBoot: true });
+    this.scheduleAlive();
+  }
+
+  /** Decelerates at once; saved after that. Holding a run that is held already changes nothing. */
+  hold(by: string): Answer {
+    if (this.isOver()) return { ok: false, why: 'The run is over.' };
+    if (this.snapshot.state === 'held' && this.halting === 0) return { ok: true, serverAtUtcMs: this.now().utcMs };
+    return this.actFirst('hold', by);
+  }
+
+  /** Decelerates at once and ends the run. */
+  stop(by: string): Answer {
+    if (this.isOver()) return { ok: false, why: 'The run is over.' };
+    return this.actFirst('stop', by);
+  }
+
+  /** Holds when the present step has ended. */
+  holdAfterDwell(by: string): Answer {
+    if (this.isOver()) return { ok: false, why: 'The run is over.' };
+    const at = this.now();
+    this.enqueue({ event: { type: 'hold-after-dwell', at, by } });
+    return { ok: true, serverAtUtcMs: at.utcMs };
+  }
+
+  /** Answers when it is saved: it starts motion, so nothing goes to the controller before. */
+  async resume(by: string): Promise<Answer> {
+    const now = this.now();
+    const arm = this.parts.armNow();
+    const allowed = mayResume(this.parts.start, this.snapshot, { utcMs: now.utcMs, arm });
+    if (!allowed.ok) return { ok: false, why: allowed.why };
+    const result = await new Promise<Advance | null>((done) => this.enqueue({ event: { type: 'resume', at: now, by, arm }, done }));
+    const refusal = result?.events.find(({ kind }) => kind === 'resume-refused');
+    if (result === null) return { ok: false, why: 'This server no longer drives the run.' };
+    if (refusal !== undefined) return { ok: false, why: String(refusal.data['why']) };
+    return { ok: true, serverAtUtcMs: now.utcMs };
+  }
+
+  facts(): RunFacts {
+    const { start, armNow } = this.parts;
+    const nowUtcMs = this.now().utcMs;
+    this.dwellsPlanned ??= plannedDwells(start, this.snapshot.context.startedAtUtcMs ?? nowUtcMs);
+    const facts = factsOf({
+      start,
+      snapshot: this.snapshot,
+      nowUtcMs,
+      arm: armNow(),
+      lastSeq: this.chain.seq,
+      predictedEndUtcMs: this.predict(this.snapshot, nowUtcMs),
+      dwellsPlanned: this.dwellsPlanned,
+    });
+    return this.databaseAwaySinceUtcMs === null ? facts : { ...facts, reason: 'The database is away; motion has been brought to rest, and the log is kept here until it is back.' };
+  }
+
+  /** Where the run stands, as last saved. */
+  state(): RunSnapshot {
+    return this.snapshot;
+  }
+
+  /** End of the event chain as last saved. */
+  head(): ChainHead {
+    return this.chain;
+  }
+
+  isOver(): boolean {
+    return this.stale || isRunOver(this.snapshot);
+  }
+
+  onChange(listener: (change: RunChange) => void): () => void {
+    this.listeners.add(listener);
+    return () => this.listeners.delete(listener);
+  }
+
+  /** Resolves when every event received so far is saved and acted on. */
+  idle(): Promise<void> {
+    if (!this.pumping && this.inbox.length === 0) return Promise.resolve();
+    return new Promise((resolve) => this.waiting.push(resolve));
+  }
+
+  /** Lets go of the run without touching it: nothing more is sent or saved, and the lease runs out. */
+  close(): void {
+    this.closed = true;
+    this.saver.close();
+    this.unsubscribe();
+    this.parts.link.setLeaseRule(() => false);
+    for (const cancel of Object.values(this.timers)) cancel?.();
+    this.inbox.length = 0;
+  }
+
+  private actFirst(kind: 'hold' | 'stop', by: string): Answer {
+    const at = this.now();
+    this.acted += 1;
+    const id = `${this.runId}-${kind}-${Math.round(at.utcMs)}-${this.acted}`;
+    this.halting += 1;
+    const releaseDrivers = this.parts.start.rig.motion?.safeWhenFree === true;
+    this.parts.link.send(kind === 'hold' ? { kind, id } : { kind, id, releaseDrivers });
+    this.enqueue({ event: { type: kind, at, by, acted: id } });
+    return { ok: true, serverAtUtcMs: at.utcMs };
+  }
+
+  private heard(link: LinkEvent): void {
+    if (this.closed || link.kind === 'accepted') return;
+    this.enqueue({ event: { type: `link.${link.kind}`, at: this.now(), link } as RunEvent });
+  }
+
+  private now(): Instant {
+    return { utcMs: this.parts.clock.utcMs(), uS: 0.001 };
+  }
+
+  private enqueue(item: Item): void {
+    if (this.closed) return;
+    this.inbox.push(item);
+    if (!this.pumping) void this.pump();
+  }
+
+  private async pump(): Promise<void> {
+    this.pumping = true;
+    for (let item = this.inbox.shift(); item !== undefined; item = this.inbox.shift()) {
+      if (item === 'beat') this.beat();
+      else if (item === 'alive') await this.saveAlive();
+      else await this.take(item);
+    }
+    this.pumping = false;
+    for (const resolve of this.waiting.splice(0)) resolve();
+  }
+
+  private async take({ event, done }: Exclude<Item, string>): Promise<void> {
+    const result = this.advanceSafely(event);
+    const halted = event.type === 'hold' || event.type === 'stop';
+    if (result.snapshot.context !== this.snapshot.context || result.snapshot.state !== this.snapshot.state) await this.saveThenAct(result, halted);
+    else if (halted) this.halting -= 1;
+    done?.(this.stale || this.closed ? null : result);
+  }
+
+  /** A fault in the chart itself must not leave a rig in motion: the run fails and a stop goes out. */
+  private advanceSafely(event: RunEvent): Advance {
+    try {
+      return advance(this.parts.start, this.snapshot, event);
+    } catch (error) {
+      const reason = { code: 'defect', text: `The run engine met a fault of its own and stopped the run: ${error instanceof Error ? error.message : String(error)}` };
+      const context = { ...this.snapshot.context, reason, endedAtUtcMs: event.at.utcMs, deadlineUtcMs: null, ahead: null };
+      const id = `${this.runId}-fault-${context.commandCount}`;
+      return {
+        snapshot: { version: CHART_VERSION, state: 'failed', context },
+        steps: [],
+        events: [{ at: event.at, kind: 'failed', data: { code: reason.code, reason: reason.text } }],
+        effects: [{ kind: 'link', id, command: { kind: 'stop', id, releaseDrivers: false } }],
+      };
+    }
+  }
+
+  private async saveThenAct(result: Advance, halted: boolean): Promise<void> {
+    const events = this.chainOn(result.events);
+    const saved = await this.save(result.snapshot, { steps: result.steps, events });
+    if (halted) this.halting -= 1;
+    if (!saved) return;
+    this.snapshot = result.snapshot;
+    this.chain = events.at(-1) ?? this.chain;
+    for (const effect of result.effects) this.performEffect(effect);
+    this.reportOutage();
+    this.armTimers();
+    this.tell({ facts: this.facts(), steps: result.steps, events });
+    if (isRunOver(this.snapshot)) this.finish();
+  }
+
+  private chainOn(happenings: Happening[]): ChainedEvent[] {
+    let head = this.chain;
+    return happenings.map(({ at, kind, data }) => {
+      const event = appendEvent(head, { at: new Date(at.utcMs).toISOString(), kind, data }, this.parts.sha256);
+      head = event;
+      return event;
+    });
+  }
+
+  private async save(snapshot: RunSnapshot, changed: { steps: StepRow[]; events: ChainedEvent[] }): Promise<boolean> {
+    const { start, clock } = this.parts;
+    const stored: StoredSnapshot = { ...snapshot, aliveUtcMs: clock.utcMs() };
+    const summary = summaryOf(snapshot, this.predict(snapshot, clock.utcMs()));
+    try {
+      const saved = await this.saver.save({
+        labId: start.labId,
+        runId: start.runId,
+        expectedSeq: this.chain.seq,
+        snapshot: stored,
+        chartVersion: CHART_VERSION,
+        ...changed,
+        summary,
+      });
+      this.savedMs = clock.monotonicMs();
+      return saved && !this.closed;
+    } catch (error) {
+      if (!(error instanceof StaleRunError)) throw error;
+      this.stale = true;
+      this.close();
+      return false;
+    }
+  }
+
+  private performEffect(effect: Effect): void {
+    if (effect.kind !== 'link') return this.parts.perform(effect);
+    const { command } = effect;
+    const startsMotion = command.kind === 'home' || command.kind === 'move';
+    if (startsMotion && (this.halting > 0 || this.databaseAwaySinceUtcMs !== null)) return;
+    if (startsMotion) this.lastBeatMs = this.parts.clock.monotonicMs();
+    this.parts.link.send(command);
+  }
+
+  /** The write goes on being tried; meanwhile nothing may move. */
+  private databaseIsAway(sinceUtcMs: number): void {
+    if (this.closed) return;
+    this.databaseAwaySinceUtcMs = sinceUtcMs;
+    if (!wantsMotion(this.snapshot)) return;
+    this.acted += 1;
+    this.parts.link.send({ kind: 'hold', id: `${this.runId}-away-${Math.round(sinceUtcMs)}-${this.acted}` });
+  }
+
+  /** Granted only while the loop turns, in a state that wants motion; a short outage of the database is bridged. */
+  private mayRenewLease(): boolean {
+    if (this.closed || this.halting > 0 || this.databaseAwaySinceUtcMs !== null || !wantsMotion(this.snapshot)) return false;
+    const nowMs = this.parts.clock.monotonicMs();
+    const { busySinceMs } = this.saver;
+    if (busySinceMs !== null) return nowMs - busySinceMs <= DATABASE_GRACE_MS;
+    return nowMs - this.lastBeatMs <= LONGEST_BEAT_MS;
+  }
+
+  private beat(): void {
+    this.lastBeatMs = this.parts.clock.monotonicMs();
+    delete this.timers.beat;
+    this.scheduleBeat();
+  }
+
+  private scheduleBeat(): void {
+    if (this.timers.beat !== undefined || !wantsMotion(this.snapshot) || this.closed) return;
+    this.timers.beat = this.parts.clock.after(BEAT_MS, () => this.enqueue('beat'));
+  }
+
+  private armTimers(): void {
+    this.lastBeatMs = this.parts.clock.monotonicMs();
+    this.scheduleBeat();
+    this.timers.deadline?.();
+    delete this.timers.deadline;
+    const deadlineUtcMs = deadlineOf(this.snapshot);
+    if (deadlineUtcMs !== null && !this.closed) this.waitFor(deadlineUtcMs);
+  }
+
+  private waitFor(deadlineUtcMs: number): void {
+    const { clock } = this.parts;
+    const leftMs = deadlineUtcMs - clock.utcMs();
+    this.timers.deadline = clock.after(Math.min(leftMs, LONGEST_WAIT_MS), () => {
+      if (deadlineUtcMs - clock.utcMs() > 0.5) this.waitFor(deadlineUtcMs);
+      else this.enqueue({ event: { type: 'deadline', at: { utcMs: Math.max(clock.utcMs(), deadlineUtcMs), uS: 0.001 } } });
+    });
+  }
+
+  private scheduleAlive(): void {
+    this.timers.alive = this.parts.clock.after(ALIVE_MS, () => {
+      if (this.isOver() || this.closed) return;
+      this.enqueue('alive');
+      this.scheduleAlive();
+    });
+  }
+
+  /** So that a restart knows how long nobody drove the run. */
+  private async saveAlive(): Promise<void> {
+    if (this.isOver() || this.parts.clock.monotonicMs() - this.savedMs < ALIVE_MS / 2) return;
+    await this.save(this.snapshot, { steps: [], events: [] });
+    this.reportOutage();
+  }
+
+  private reportOutage(): void {
+    const sinceUtcMs = this.databaseAwaySinceUtcMs;
+    this.databaseAwaySinceUtcMs = null;
+    if (sinceUtcMs !== null) this.inbox.unshift({ event: { type: 'database-away', at: this.now(), sinceUtcMs } });
+  }
+
+  private finish(): void {
+    this.unsubscribe();
+    this.parts.link.setLeaseRule(() => false);
+    for (const cancel of Object.values(this.timers)) cancel?.();
+  }
+
+  private tell(change: RunChange): void {
+    for (const listener of this.listeners) listener(change);
+  }
+}
+
+function snapshotIn(stored: StoredRun): RunSnapshot {
+  const { version, state, context } = stored.snapshot as StoredSnapshot;
+  return { version, state, context };
+}

@@ -1,0 +1,124 @@
+import type { RunStart, StepRow } from '@/shared/archive/run-records';
+import type { RunState } from '@/shared/contracts/runs';
+import { planTimeline } from '@/shared/protocol/timeline';
+import type { RunSummaryColumns } from '../interfaces/run-store';
+import { Draft, nothingOut } from './draft';
+import { resumeRefusal } from './halting';
+import { predictEndUtcMs } from './predicted-end';
+import type { Arm, ChartState, InterventionKind, RunSnapshot } from './run-context';
+
+/** What screens and lists show of a run, read off its snapshot. */
+export interface RunFacts {
+  runId: string;
+  state: RunState;
+  /** Why it is held, stopped or failed, and what would help; empty while all is well. */
+  reason: string;
+  startedAtUtcMs: number | null;
+  endedAtUtcMs: number | null;
+  predictedEndUtcMs: number | null;
+  current: StepRow | null;
+  /** When the present step ends by plan; null where it ends by an event. */
+  deadlineUtcMs: number | null;
+  dwellsDone: number;
+  dwellsPlanned: number;
+  holdAfterDwell: boolean;
+  intervention: { kind: InterventionKind; by: string; serverAtUtcMs: number; confirmedAtUtcMs: number | null } | null;
+  mayResume: { ok: boolean; why: string };
+  /** Last sequence number of the event chain. */
+  lastSeq: number;
+}
+
+const shown: Record<ChartState, RunState> = {
+  starting: 'starting',
+  choosing: 'running',
+  homing: 'running',
+  moving: 'running',
+  standing: 'running',
+  interrupted: 'holding',
+  holding: 'holding',
+  held: 'held',
+  stopping: 'stopping',
+  stopped: 'stopped',
+  finished: 'finished',
+  failed: 'failed',
+};
+
+/** An interrupted dwell goes on: nothing moves, and the run waits for the line only when its next motion is due. */
+export function runStateOf({ state, context }: RunSnapshot): RunState {
+  return state === 'interrupted' && context.step?.motion === null ? 'running' : shown[state];
+}
+
+const outcomes: Partial<Record<ChartState, 'finished' | 'held' | 'stopped' | 'failed'>> = { finished: 'finished', held: 'held', stopped: 'stopped', failed: 'failed' };
+
+export function summaryOf(snapshot: RunSnapshot, predictedEndUtcMs: number | null): RunSummaryColumns {
+  const { startedAtUtcMs, endedAtUtcMs } = snapshot.context;
+  return { state: runStateOf(snapshot), outcome: outcomes[snapshot.state] ?? null, startedAtUtcMs, endedAtUtcMs, predictedEndUtcMs };
+}
+
+/** Whether a person could resume now, and if not, what stands in the way. */
+export function mayResume(start: RunStart, snapshot: RunSnapshot, now: { utcMs: number; arm: Arm | null }): { ok: boolean; why: string } {
+  if (snapshot.state === 'holding') return { ok: false, why: 'The run is still coming to rest.' };
+  if (snapshot.state !== 'held') return { ok: false, why: 'The run is not held.' };
+  const event = { type: 'resume' as const, at: { utcMs: now.utcMs, uS: 0 }, by: '', arm: now.arm };
+  const why = resumeRefusal(new Draft(start, event, { context: snapshot.context, out: nothingOut }));
+  return { ok: why === null, why: why ?? '' };
+}
+
+export interface FactsInput {
+  start: RunStart;
+  snapshot: RunSnapshot;
+  nowUtcMs: number;
+  arm: Arm | null;
+  lastSeq: number;
+  predictedEndUtcMs: number | null;
+  dwellsPlanned: number;
+}
+
+export function factsOf({ start, snapshot, nowUtcMs, arm, lastSeq, predictedEndUtcMs, dwellsPlanned }: FactsInput): RunFacts {
+  const { context } = snapshot;
+  const open = context.step !== null && context.step.row.outcome === null ? context.step.row : null;
+  const { intervention } = context;
+  return {
+    runId: start.runId,
+    state: runStateOf(snapshot),
+    reason: context.reason?.text ?? '',
+    startedAtUtcMs: context.startedAtUtcMs,
+    endedAtUtcMs: context.endedAtUtcMs,
+    predictedEndUtcMs,
+    current: open,
+    deadlineUtcMs: open?.plannedEndUtcMs ?? null,
+    dwellsDone: context.dwellsDone,
+    dwellsPlanned,
+    holdAfterDwell: context.holdAfterStep !== null,
+    intervention:
+      intervention === null
+        ? null
+        : { kind: intervention.kind, by: intervention.by, serverAtUtcMs: intervention.serverAtUtcMs, confirmedAtUtcMs: intervention.confirmedAtUtcMs },
+    mayResume: mayResume(start, snapshot, { utcMs: nowUtcMs, arm }),
+    lastSeq,
+  };
+}
+
+/** Dwells of the plan as it stood at the start. */
+export function plannedDwells(start: RunStart, fromUtcMs: number): number {
+  return planTimeline(start, { utcMs: fromUtcMs, angleDeg: start.rig.motion?.homeDeg ?? 0 }).dwells;
+}
+
+/** Keeps the predicted finish and works it out anew only when the run is off what was predicted. */
+export function createPredictor(start: RunStart): (snapshot: RunSnapshot, nowUtcMs: number) => number | null {
+  let expected = new Map<string, number>();
+  let endUtcMs: number | null = null;
+  return (snapshot, nowUtcMs) => {
+    const { context, state } = snapshot;
+    if (context.startedAtUtcMs === null) return null;
+    if (state === 'stopped' || state === 'failed' || state === 'held' || state === 'holding' || state === 'stopping') return null;
+    if (context.endedAtUtcMs !== null) return context.endedAtUtcMs;
+    const row = context.step?.row;
+    const due = row === undefined ? undefined : expected.get(row.path);
+    if (endUtcMs !== null && row !== undefined && due !== undefined && Math.abs(row.startUtcMs - due) < 1000) return endUtcMs;
+    expected = new Map();
+    endUtcMs = predictEndUtcMs(start, context, { nowUtcMs, eachStep: (path, startUtcMs) => expected.set(path, startUtcMs) });
+    if (row !== undefined) expected.set(row.path, row.startUtcMs);
+    return endUtcMs;
+  };
+}

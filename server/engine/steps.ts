@@ -1,0 +1,394 @@
+import type { StepOutcome, StepRow, StepRowKind } from '@/shared/archive/run-records';
+import { advanceCursor, type PlannedItem } from '@/shared/protocol/cursor';
+import type { Step, SwingStep } from '@/shared/protocol/document';
+import { dwellEndUtcMs, homeDurationS, homeSpeedDegS, motionOf, settleEndUtcMs, type SwingMove, swingMove, UnplayableStep, waitUntilLocalTime } from '@/shared/protocol/durations';
+import { pathObstacles } from '@/shared/protocol/motion-path';
+import { stationAt } from '@/shared/protocol/stations';
+import type { RigMotion } from '@/shared/rig/document';
+import type { Instant } from '../interfaces/clock';
+import type { Draft } from './draft';
+import type { ActiveStep, Motion } from './run-context';
+import { BEGIN_GRACE_MS, LATE_MS, LEAD_MS, LEAST_LEAD_MS, MOTION_GRACE_MS } from './timing';
+
+/** How steps begin and end: the actions of the chart that follow the protocol. */
+
+/** Half a step of the motor and rounding: nearer than this the sources stand where they should, deg. */
+export function toleranceDeg(draft: Draft): number {
+  return 0.51 / (draft.start.rig.motion?.stepsPerDegree ?? 1) + 1e-6;
+}
+
+/** Standard uncertainty of a counted angle: a step and the backlash, both rectangular, deg. */
+function countedU(draft: Draft): number {
+  const { stepsPerDegree = 1, backlash_deg: backlashDeg = 0 } = draft.start.rig.motion ?? {};
+  return Math.hypot(1 / stepsPerDegree, backlashDeg) / Math.sqrt(12);
+}
+
+interface RowPlan {
+  item: PlannedItem;
+  station: string;
+  endUtcMs: number | null;
+}
+
+/** A row that begins where and when the step before it ended. */
+function newRow(draft: Draft, { item, station, endUtcMs }: RowPlan): StepRow {
+  const { moment } = draft.context;
+  return {
+    seq: 0,
+    path: item.path,
+    kind: item.step.kind as StepRowKind,
+    label: item.step.label ?? '',
+    station,
+    plannedStartUtcMs: moment.utcMs,
+    plannedEndUtcMs: endUtcMs,
+    startUtcMs: moment.utcMs,
+    endUtcMs: null,
+    uStartS: moment.uS,
+    uEndS: null,
+    angleStartDeg: draft.controller.positionKnown ? moment.angleDeg : null,
+    angleEndDeg: null,
+    outcome: null,
+    angleSource: 'counted',
+    uAngleDeg: countedU(draft),
+    good: null,
+  };
+}
+
+/** Takes the next step of the protocol and begins it; marks are written in passing. */
+export function chooseNext(draft: Draft): void {
+  const { context } = draft;
+  context.step = null;
+  context.ahead = null;
+  context.moveRetries = 0;
+  for (;;) {
+    const { item, cursor } = advanceCursor(draft.start, context.cursor, context.moment);
+    if (item === null) {
+      context.cursor = cursor;
+      context.next = 'finished';
+      return;
+    }
+    if (holdIsDue(draft)) {
+      context.next = 'holding';
+      return;
+    }
+    context.cursor = cursor;
+    if (item.step.kind !== 'mark') return beginItem(draft, item);
+    writeMark(draft, item);
+  }
+}
+
+/** Whether the run is to hold between two steps; sets the reason. */
+function holdIsDue(draft: Draft): boolean {
+  const { holdAfterStep, moment } = draft.context;
+  if (holdAfterStep !== null) {
+    draft.because('hold-after-dwell', `${holdAfterStep} asked to hold when the step had ended.`);
+    return true;
+  }
+  if (!armHasEnded(draft, moment.utcMs)) return false;
+  draft.because('arm-ended', `The arm of ${draft.context.arm?.name ?? 'the rig'} has ended. Arm the rig again on site, then resume.`);
+  return true;
+}
+
+function armHasEnded(draft: Draft, atUtcMs: number): boolean {
+  const { arm } = draft.context;
+  return draft.start.simulated === null && arm !== null && arm.untilUtcMs <= atUtcMs;
+}
+
+function writeMark(draft: Draft, item: PlannedItem): void {
+  const { context } = draft;
+  const { moment } = context;
+  const row = newRow(draft, { item, station: stationAt(draft.start.rig, moment.angleDeg), endUtcMs: moment.utcMs });
+  draft.openStep({ item, row, plannedMs: 0, motion: null, broken: false });
+  draft.closeRow({ at: moment, angleDeg: row.angleStartDeg, outcome: 'done' });
+  context.step = null;
+}
+
+/** Begins a step at the present moment; one that this rig cannot carry out fails the run with a sentence. */
+export function beginItem(draft: Draft, item: PlannedItem): void {
+  try {
+    beginKind(draft, item);
+  } catch (error) {
+    if (!(error instanceof UnplayableStep)) throw error;
+    draft.because(error.code, `Step ${item.path}: ${error.message}`);
+    draft.context.next = 'failed';
+  }
+}
+
+function beginKind(draft: Draft, item: PlannedItem): void {
+  switch (item.step.kind) {
+    case 'home':
+      return beginHome(draft, item);
+    case 'swing':
+      return beginSwing(draft, { item, late: false });
+    case 'dwell':
+    case 'settle':
+    case 'wait':
+      return beginStanding(draft, item);
+    default:
+      draft.because('not-yet', `Step ${item.path}: ${item.step.kind} cannot be run by this version; issue a revision without it.`);
+      draft.context.next = 'failed';
+  }
+}
+
+export function beginHome(draft: Draft, item: PlannedItem): void {
+  const { context, start } = draft;
+  const motionLimits = motionOf(start.rig);
+  const durationMs = 1000 * homeDurationS(start.rig, context.moment.angleDeg);
+  const row = newRow(draft, { item, station: stationAt(start.rig, motionLimits.homeDeg), endUtcMs: context.moment.utcMs + durationMs });
+  const commandId = draft.command((id) => ({ kind: 'home', id }));
+  const motion = { commandId, targetDeg: null, startUtcMs: null, durationMs: homeLimitMs(motionLimits), late: false, began: false, ended: false };
+  draft.openStep({ item, row, plannedMs: null, motion, broken: false });
+  context.swingStartUtcMs = null;
+  context.deadlineUtcMs = draft.nowUtcMs + motion.durationMs + MOTION_GRACE_MS;
+  context.next = 'homing';
+}
+
+/** Homing gives up after the whole travel at home speed, once to find the flag and once to come back to its edge. */
+function homeLimitMs(motion: RigMotion): number {
+  return (2000 * (motion.maxDeg - motion.minDeg)) / homeSpeedDegS(motion);
+}
+
+export interface SwingStart {
+  item: PlannedItem;
+  /** The move is made later than the plan wanted: after a hold or an interruption. */
+  late: boolean;
+}
+
+/** Sends the move at once: there was no dwell before it from whose end it could be timed. */
+export function beginSwing(draft: Draft, { item, late }: SwingStart): void {
+  const { context } = draft;
+  if (!draft.controller.positionKnown) {
+    draft.because('position-unknown', `Step ${item.path}: the position of the turntable is not known. Begin the protocol with a home step.`);
+    context.next = 'failed';
+    return;
+  }
+  const move = swingMove(item.step as SwingStep, draft.start.rig, context.moment.angleDeg);
+  const obstacle = obstacleOn(draft, move.targetDeg);
+  if (obstacle !== null) {
+    draft.because('path-blocked', `Step ${item.path}: the move is refused because ${obstacle}.`);
+    context.next = 'failed';
+    return;
+  }
+  const commandId = sendMove(draft, move, null);
+  openSwing(draft, { item, commandId, startUtcMs: null, late });
+  context.deadlineUtcMs = draft.nowUtcMs + 1000 * move.durationS + MOTION_GRACE_MS;
+  context.next = 'moving';
+}
+
+/** The limits are kept here too, whatever was checked before; a counted angle may be off by half a step of the motor. */
+function obstacleOn(draft: Draft, targetDeg: number): string | null {
+  const { angleDeg } = draft.context.moment;
+  const wayDeg = targetDeg - angleDeg;
+  const fromDeg = angleDeg + Math.sign(wayDeg) * Math.min(Math.abs(wayDeg), toleranceDeg(draft));
+  return pathObstacles(motionOf(draft.start.rig), fromDeg, targetDeg)[0]?.reason ?? null;
+}
+
+function sendMove(draft: Draft, { targetDeg, speedDegS, accelerationDegS2 }: SwingMove, startUtcMs: number | null): string {
+  return draft.command((id) => ({ kind: 'move', id, targetDeg, speedDegS, accelerationDegS2, startUtcMs }));
+}
+
+interface SwingOpening extends SwingStart {
+  commandId: string;
+  startUtcMs: number | null;
+}
+
+function openSwing(draft: Draft, { item, commandId, startUtcMs, late }: SwingOpening): void {
+  const { context } = draft;
+  const move = swingMove(item.step as SwingStep, draft.start.rig, context.moment.angleDeg);
+  const durationMs = 1000 * move.durationS;
+  const row = newRow(draft, { item, station: move.station, endUtcMs: context.moment.utcMs + durationMs });
+  const motion: Motion = { commandId, targetDeg: move.targetDeg, startUtcMs, durationMs, late, began: false, ended: false };
+  draft.openStep({ item, row, plannedMs: durationMs, motion, broken: false });
+}
+
+/** Begins a dwell, settle or wait; `plannedMs` where it begins anew after a hold and lasts as long as first planned. */
+export function beginStanding(draft: Draft, item: PlannedItem, plannedMs: number | null = null): void {
+  const { context, start } = draft;
+  const { moment } = context;
+  const end = plannedMs === null ? standingEnd(draft, item.step) : { endUtcMs: moment.utcMs + plannedMs, holds: false };
+  const row = newRow(draft, { item, station: stationOf(draft), endUtcMs: end.endUtcMs });
+  draft.openStep({ item, row, plannedMs: end.endUtcMs - moment.utcMs, motion: null, broken: false });
+  context.deadlineUtcMs = Math.max(moment.utcMs, end.endUtcMs - LEAD_MS);
+  context.next = 'standing';
+  if (!end.holds) return;
+  draft.closeRow({ at: moment, angleDeg: row.angleStartDeg, outcome: 'done' });
+  context.step = null;
+  draft.because('wait-past', `Step ${item.path}: ${describeTime(item.step)} in ${start.timeZone} was already past.`);
+  context.next = 'holding';
+}
+
+function describeTime(step: Step): string {
+  return step.kind === 'wait' && 'localTime' in step.until ? step.until.localTime : 'the time';
+}
+
+/** The station at which the sources were brought to stand; a counted angle is off the station's by up to half a step. */
+function stationOf(draft: Draft): string {
+  const { rig } = draft.start;
+  const { angleDeg } = draft.context.moment;
+  const tolerance = toleranceDeg(draft);
+  return Object.keys(rig.stations).find((name) => Math.abs((rig.stations[name]?.value ?? Number.NaN) - angleDeg) <= tolerance) ?? '';
+}
+
+function standingEnd(draft: Draft, step: Step): { endUtcMs: number; holds: boolean } {
+  const { moment, swingStartUtcMs } = draft.context;
+  const { rig, timeZone } = draft.start;
+  if (step.kind === 'dwell') return { endUtcMs: dwellEndUtcMs(step, rig, { startUtcMs: moment.utcMs, swingStartUtcMs }), holds: false };
+  if (step.kind === 'settle') return { endUtcMs: settleEndUtcMs(step, moment.utcMs), holds: false };
+  if (step.kind === 'wait' && 'localTime' in step.until) {
+    const { localTime, ifPast = 'continue' } = step.until;
+    const { endUtcMs, past } = waitUntilLocalTime({ localTime, ifPast, timeZone, utcMs: moment.utcMs });
+    return { endUtcMs, holds: past && ifPast === 'hold' };
+  }
+  return { endUtcMs: moment.utcMs, holds: false };
+}
+
+export function standingEndUtcMs(step: ActiveStep): number {
+  return step.row.plannedEndUtcMs ?? step.row.startUtcMs;
+}
+
+/** A standing step ends at its planned instant, whenever the server gets round to saying so. */
+export function endStanding(draft: Draft): void {
+  const { step, uPlanS, moment } = draft.context;
+  if (step === null) return;
+  const at: Instant = { utcMs: standingEndUtcMs(step), uS: uPlanS };
+  draft.closeRow({ at, angleDeg: step.row.angleStartDeg, outcome: 'done' });
+  draft.standAt(at, moment.angleDeg);
+  draft.context.onCadence = true;
+  draft.context.swingStartUtcMs = null;
+}
+
+/**
+ * Shortly before a standing step ends: if a swing follows, sends its move with the end as the controller's start time,
+ * so that no jitter of the server reaches the cadence. Otherwise waits for the end.
+ */
+export function sendAhead(draft: Draft): void {
+  const { context } = draft;
+  const { step } = context;
+  if (step === null) return;
+  const endUtcMs = standingEndUtcMs(step);
+  context.deadlineUtcMs = endUtcMs;
+  if (endUtcMs - draft.nowUtcMs < LEAST_LEAD_MS || context.moveRetries > 0) return;
+  if (context.holdAfterStep !== null || armHasEnded(draft, endUtcMs) || !draft.controller.positionKnown) return;
+  const swing = peekSwing(draft, endUtcMs);
+  if (swing === null) return;
+  const move = swingMove(swing, draft.start.rig, context.moment.angleDeg);
+  if (obstacleOn(draft, move.targetDeg) !== null) return;
+  const commandId = sendMove(draft, move, endUtcMs);
+  context.ahead = { commandId, targetDeg: move.targetDeg, startUtcMs: endUtcMs, cancelled: false };
+  context.deadlineUtcMs = endUtcMs + BEGIN_GRACE_MS;
+}
+
+/** The swing that follows at `utcMs`, looking through marks, or null where something else follows. */
+function peekSwing(draft: Draft, utcMs: number): SwingStep | null {
+  let { cursor } = draft.context;
+  const moment = { utcMs, angleDeg: draft.context.moment.angleDeg };
+  for (;;) {
+    const next = advanceCursor(draft.start, cursor, moment);
+    if (next.item === null) return null;
+    if (next.item.step.kind === 'swing') return next.item.step;
+    if (next.item.step.kind !== 'mark') return null;
+    cursor = next.cursor;
+  }
+}
+
+/** The controller began the move that was sent ahead: the standing step is over and the swing is the present step. */
+export function takeAhead(draft: Draft): void {
+  const { context } = draft;
+  const { ahead } = context;
+  if (ahead === null) return;
+  endStanding(draft);
+  context.step = null;
+  context.ahead = null;
+  for (;;) {
+    const { item, cursor } = advanceCursor(draft.start, context.cursor, context.moment);
+    if (item === null) return;
+    context.cursor = cursor;
+    if (item.step.kind === 'swing') {
+      openSwing(draft, { item, commandId: ahead.commandId, startUtcMs: ahead.startUtcMs, late: false });
+      noteBegan(draft);
+      return;
+    }
+    writeMark(draft, item);
+  }
+}
+
+/** The controller's stamp of the beginning goes into the row; from it a beat is counted. */
+export function noteBegan(draft: Draft): void {
+  const { context, stamp, event } = draft;
+  const { step } = context;
+  if (step?.motion == null || event.type !== 'link.motion-began') return;
+  step.motion.began = true;
+  context.moveRetries = 0;
+  context.uPlanS = stamp.uS;
+  if (context.onCadence && stamp.utcMs - step.row.plannedStartUtcMs > LATE_MS) step.motion.late = true;
+  Object.assign(step.row, { startUtcMs: stamp.utcMs, uStartS: stamp.uS });
+  if (event.link.angleDeg !== null) step.row.angleStartDeg = event.link.angleDeg;
+  if (step.row.kind === 'swing') context.swingStartUtcMs = stamp.utcMs;
+  draft.saveRow(step.row);
+  confirmResume(draft);
+}
+
+/** From its beginning on, a motion may take as long as its profile and some grace. */
+export function expectEnd(draft: Draft): void {
+  const { step } = draft.context;
+  if (step?.motion != null) draft.context.deadlineUtcMs = draft.stamp.utcMs + step.motion.durationMs + MOTION_GRACE_MS;
+}
+
+/** The controller refused or cancelled the move that was sent ahead: it is made at once when the step ends. */
+export function dropAhead(draft: Draft): void {
+  const { context } = draft;
+  context.ahead = null;
+  context.moveRetries += 1;
+  if (context.step !== null) context.deadlineUtcMs = standingEndUtcMs(context.step);
+}
+
+/** The controller could not take the motion just now: it is asked again, under a new id. */
+export function askAgain(draft: Draft): void {
+  const { context, start } = draft;
+  const { step } = context;
+  if (step?.motion == null) return;
+  context.moveRetries += 1;
+  if (step.item.step.kind !== 'swing') {
+    step.motion.commandId = draft.command((id) => ({ kind: 'home', id }));
+    return;
+  }
+  step.motion.commandId = sendMove(draft, swingMove(step.item.step, start.rig, context.moment.angleDeg), null);
+}
+
+function confirmResume(draft: Draft): void {
+  const { intervention } = draft.context;
+  if (intervention?.kind === 'resume' && intervention.confirmedAtUtcMs === null) intervention.confirmedAtUtcMs = draft.stamp.utcMs;
+}
+
+/** The motion is over, as planned or not: the row gets the controller's stamp and the achieved angle, and stays open. */
+export function noteEnded(draft: Draft): void {
+  const { context, stamp, event } = draft;
+  if (event.type !== 'link.motion-ended' && event.type !== 'link.homed') return;
+  const { angleDeg } = event.link;
+  context.uPlanS = stamp.uS;
+  if (context.controller !== null) Object.assign(context.controller, { moving: false, angleDeg, positionKnown: angleDeg !== null });
+  const { step } = context;
+  if (step?.motion == null) return;
+  step.motion.ended = true;
+  Object.assign(step.row, { endUtcMs: stamp.utcMs, uEndS: stamp.uS, angleEndDeg: angleDeg });
+}
+
+/** The motion ended where it should: the row is done and the sources stand. */
+export function finishMotion(draft: Draft): void {
+  const { step, moment } = draft.context;
+  if (step?.motion == null) return;
+  const { row, motion } = step;
+  const at: Instant = { utcMs: row.endUtcMs ?? draft.stamp.utcMs, uS: row.uEndS ?? draft.stamp.uS };
+  const outcome: StepOutcome = motion.late ? 'late' : 'done';
+  if (row.kind === 'home') row.angleSource = 'edge-verified';
+  draft.closeRow({ at, angleDeg: row.angleEndDeg, outcome });
+  draft.standAt(at, row.angleEndDeg ?? moment.angleDeg);
+  draft.context.onCadence = false;
+}
+
+/** Whether the motion that was noted as ended reached what it was sent to. */
+export function reachedTarget(draft: Draft): boolean {
+  const { step } = draft.context;
+  const angleDeg = step?.row.angleEndDeg ?? null;
+  if (step?.motion == null || angleDeg === null) return false;
+  return step.motion.targetDeg === null || Math.abs(angleDeg - step.motion.targetDeg) <= toleranceDeg(draft);
+}

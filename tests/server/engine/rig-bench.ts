@@ -1,0 +1,140 @@
+import { createHash } from 'node:crypto';
+import type { RunStart, StepRow, ChainedEvent } from '@/shared/archive/run-records';
+import type { ProtocolDocument } from '@/shared/protocol/document';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import { type RunStore, type RunWrite, StaleRunError, type StoredRun } from '@/server/interfaces/run-store';
+import { RunDriver, type RunDriverParts } from '@/server/engine/run-driver';
+import type { Arm, Effect } from '@/server/engine/run-context';
+import { VirtualClock } from '@/server/engine/virtual-clock';
+import { FakeLink } from './fake-link';
+
+/** A rig on a fake clock, a store in memory and a driver between them. */
+
+export const startUtcMs = Date.UTC(2026, 2, 1, 22, 0, 0);
+export const sha256 = (text: string) => createHash('sha256').update(text).digest('hex');
+export const settle = () => new Promise<void>((resolve) => setImmediate(resolve));
+
+/** Home, near, then two reversals of 60 s: some two minutes and a half. */
+export const shortProtocol: ProtocolDocument = {
+  formatVersion: 1,
+  name: 'Short',
+  steps: [
+    { kind: 'home' },
+    { kind: 'swing', to: 'near' },
+    { kind: 'dwell', for_s: 60 },
+    { kind: 'mark', label: 'half way' },
+    { kind: 'swing', to: 'far' },
+    { kind: 'dwell', for_s: 60 },
+  ],
+};
+
+export const runStart = (protocol: ProtocolDocument = shortProtocol, more: Partial<RunStart> = {}): RunStart => ({
+  labId: 'lab',
+  runId: 'run-1',
+  rigId: 'north-bench',
+  rigName: 'North bench',
+  rigRevision: 1,
+  protocolName: protocol.name,
+  protocolRevision: 1,
+  rig: demoRigWide,
+  protocol,
+  massSetLabel: 'lead',
+  timeZone: 'Europe/Oslo',
+  operator: 'Ada Quill',
+  notes: '',
+  arm: { name: 'Ada Quill', untilUtcMs: startUtcMs + 16 * 3_600_000 },
+  simulated: null,
+  ...more,
+});
+
+/** Keeps runs as JSON text, as a database would: what is not plain data is lost. */
+export class MemoryStore implements RunStore {
+  stored: string | null = null;
+  readonly rows = new Map<number, StepRow>();
+  readonly events: ChainedEvent[] = [];
+  writes = 0;
+  /** Asked before each commit: a returned error is thrown, `lost` is thrown after the write was made. */
+  fault: (write: RunWrite) => 'none' | 'away' | 'answer-lost' = () => 'none';
+
+  constructor(private readonly start: RunStart) {}
+
+  async load(): Promise<StoredRun | null> {
+    return this.stored === null ? null : (JSON.parse(this.stored) as StoredRun);
+  }
+
+  async unfinished(): Promise<StoredRun[]> {
+    const run = await this.load();
+    return run === null ? [] : [run];
+  }
+
+  async commit(write: RunWrite): Promise<void> {
+    const fault = this.fault(write);
+    if (fault === 'away') throw new Error('the database is away');
+    const head = this.events.at(-1);
+    if ((head?.seq ?? 0) !== write.expectedSeq) throw new StaleRunError(`the chain ends at ${head?.seq ?? 0}`);
+    this.events.push(...(JSON.parse(JSON.stringify(write.events)) as ChainedEvent[]));
+    for (const row of JSON.parse(JSON.stringify(write.steps)) as StepRow[]) this.rows.set(row.seq, row);
+    const last = this.events.at(-1);
+    const chain = last === undefined ? { seq: 0, hash: '0'.repeat(64) } : { seq: last.seq, hash: last.hash };
+    this.stored = JSON.stringify({ start: this.start, snapshot: write.snapshot, chartVersion: write.chartVersion, chain });
+    this.writes += 1;
+    if (fault === 'answer-lost') throw new Error('the connection broke before the answer');
+  }
+
+  log(): StepRow[] {
+    return [...this.rows.values()].sort((a, b) => a.seq - b.seq);
+  }
+
+  kinds(): string[] {
+    return this.events.map(({ kind }) => kind);
+  }
+}
+
+export interface Bench {
+  clock: VirtualClock;
+  link: FakeLink;
+  store: MemoryStore;
+  driver: RunDriver;
+  start: RunStart;
+  performed: Effect[];
+  arm: { now: Arm | null };
+  /** Lets virtual time go by. */
+  pass(seconds: number, until?: () => boolean): Promise<void>;
+  /** The process is gone; another takes the run up `afterS` later. */
+  restart(afterS: number): Promise<void>;
+}
+
+export function makeBench(start: RunStart = runStart()): Bench {
+  const clock = new VirtualClock(startUtcMs, settle);
+  const link = new FakeLink(clock);
+  const store = new MemoryStore(start);
+  const performed: Effect[] = [];
+  const arm = { now: start.arm };
+  const parts = (stored: StoredRun | null): RunDriverParts => ({ start, stored, store, link, clock, sha256, armNow: () => arm.now, perform: (effect) => performed.push(effect) });
+  const bench: Bench = {
+    clock,
+    link,
+    store,
+    start,
+    performed,
+    arm,
+    driver: new RunDriver(parts(null)),
+    pass: (seconds, until) => clock.advance(1000 * seconds, until),
+    restart: async (afterS) => {
+      bench.driver.close();
+      await clock.advance(1000 * afterS);
+      bench.driver = new RunDriver(parts(await store.load()));
+      bench.driver.recover();
+      await clock.advance(0);
+    },
+  };
+  return bench;
+}
+
+/** A bench whose run is under way, `seconds` after its start. */
+export async function underWay(seconds: number, start: RunStart = runStart()): Promise<Bench> {
+  const bench = makeBench(start);
+  bench.driver.start();
+  await bench.pass(seconds);
+  return bench;
+}
