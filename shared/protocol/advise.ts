@@ -114,11 +114,14 @@ interface SideDwell {
   durationS: number;
 }
 
+/** The near and far dwells; none where most dwells stand elsewhere, as in a scan: that is no series of reversals. */
 function sidesOf(items: readonly TimelineItem[], rig: RigDocument): SideDwell[] {
-  return items.flatMap((item) => {
-    const side = item.kind === 'dwell' ? sideAt(rig, item.angleToDeg) : null;
+  const dwells = items.filter(({ kind }) => kind === 'dwell');
+  const sides = dwells.flatMap((item) => {
+    const side = sideAt(rig, item.angleToDeg);
     return side === null ? [] : [{ side, durationS: durationS(item) }];
   });
+  return 2 * sides.length >= dwells.length ? sides : [];
 }
 
 function unequalSides(dwells: readonly SideDwell[]): Finding[] {
