@@ -1,0 +1,79 @@
+import type { Basis, SeparableSegment } from './variable-projection';
+
+/**
+ * The dwell model: y = c₀ + c₁ (t − t₀) + e^(−γt) (A cos ωᵢt + B sin ωᵢt), with ω and γ shared by all segments and
+ * ωᵢ² = ω² + shiftᵢ, where the sources stiffen or soften the pendulum.
+ */
+export interface RingDownData {
+  /** Seconds from the segment's start. */
+  tS: Float64Array;
+  y: Float64Array;
+  /** Number of samples behind each datum (its weight); absent: all alike. */
+  weight?: Float64Array;
+  /** Time at which c₀ is the centre, s; absent: the mean of `tS`. */
+  centreS?: number;
+  /** What the sources add to ω², rad2/s2; absent: 0. */
+  shift?: number;
+}
+
+/** Order of the linear coefficients of a segment. */
+export const offset = 0;
+export const slope = 1;
+export const cosine = 2;
+export const sine = 3;
+
+/** A segment for `fitSeparable` with the parameters [ω (rad/s), γ (1/s)]. */
+export function ringDownSegment(data: RingDownData): SeparableSegment {
+  const { tS, y, shift = 0 } = data;
+  const centreS = data.centreS ?? mean(tS);
+  return {
+    y,
+    ...(data.weight === undefined ? {} : { rootWeight: data.weight.map(Math.sqrt) }),
+    basis: ([omega, gamma]) =>
+      ringDownBasis(tS, centreS, {
+        omega: Math.sqrt((omega as number) ** 2 + shift),
+        slope: (omega as number) / Math.sqrt((omega as number) ** 2 + shift),
+        gamma: gamma as number,
+      }),
+  };
+}
+
+function ringDownBasis(tS: Float64Array, centreS: number, at: { omega: number; slope: number; gamma: number }): Basis {
+  const n = tS.length;
+  const one = new Float64Array(n).fill(1);
+  const time = new Float64Array(n);
+  const c = new Float64Array(n);
+  const s = new Float64Array(n);
+  const tc = new Float64Array(n);
+  const ts = new Float64Array(n);
+  const minusTc = new Float64Array(n);
+  const minusTs = new Float64Array(n);
+  for (let i = 0; i < n; i += 1) {
+    const t = tS[i] as number;
+    const decay = Math.exp(-at.gamma * t);
+    const cos = decay * Math.cos(at.omega * t);
+    const sin = decay * Math.sin(at.omega * t);
+    time[i] = t - centreS;
+    c[i] = cos;
+    s[i] = sin;
+    tc[i] = t * cos * at.slope;
+    ts[i] = -t * sin * at.slope;
+    minusTc[i] = -t * cos;
+    minusTs[i] = -t * sin;
+  }
+  return {
+    columns: [one, time, c, s],
+    derivatives: [
+      { column: cosine, parameter: 0, values: ts },
+      { column: sine, parameter: 0, values: tc },
+      { column: cosine, parameter: 1, values: minusTc },
+      { column: sine, parameter: 1, values: minusTs },
+    ],
+  };
+}
+
+export function mean(values: ArrayLike<number>): number {
+  let sum = 0;
+  for (let i = 0; i < values.length; i += 1) sum += values[i] as number;
+  return sum / values.length;
+}
