@@ -53,7 +53,7 @@ export const listMembers = defineRoute({
 });
 export const invite = defineRoute({
   name: 'invite', summary: 'Invite somebody by e-mail', method: 'POST', path: '/labs/:labId/invitations', access: 'members.manage', status: 201, idempotent: true,
-  body: z.strictObject({ email: emailSchema, role: roleSchema }), response: invitationViewSchema, problems: ['invalid-input', 'already-exists'],
+  body: z.strictObject({ email: emailSchema, role: roleSchema }), response: invitationViewSchema, problems: ['invalid-input', 'already-exists', 'too-many-requests'],
 });
 export const withdrawInvitation = defineRoute({ name: 'withdrawInvitation', summary: 'Withdraw an open invitation', method: 'DELETE', path: '/labs/:labId/invitations/:invitationId', access: 'members.manage', status: 204, problems: ['not-found'] });
 export const changeMemberRole = defineRoute({
