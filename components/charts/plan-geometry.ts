@@ -26,15 +26,12 @@ export interface PlanLayout {
   keepOut: [number, number][];
 }
 
-/** Radius of the drawn turntable within the square. */
-export const tableRadius = 0.93;
-
 export function planLayout(rig: RigDocument): PlanLayout {
   const { sources, pendulum } = rig;
   const orbitM = sources.orbit?.value ?? pendulum.arm.value * 1.4;
   const radiusM = sources.radius?.value ?? orbitM * 0.2;
-  // The outermost matter just reaches the rim; a rig without sources keeps the pendulum's scale.
-  const scale = tableRadius / (orbitM + radiusM * 0.35);
+  // The outermost matter, or the ticks on the circle, just reach the edge of the square.
+  const scale = 0.98 / (orbitM + Math.max(radiusM, orbitM * 0.07));
   const seen = new Map<string, PlanStation>();
   for (const [name, station] of Object.entries(rig.stations)) {
     for (const angleDeg of [station.value, station.value + 180]) {

@@ -3,7 +3,7 @@ import Svg, { Circle, G, Line, Path } from 'react-native-svg';
 import { useTheme, type ThemeColors } from '@/components/theme';
 import { formatDegrees } from '@/shared/lib/format-angle';
 import type { RigDocument } from '@/shared/rig/document';
-import { planLayout, polar, stationNear, tableRadius, type PlanLayout } from './plan-geometry';
+import { planLayout, polar, stationNear, type PlanLayout } from './plan-geometry';
 import { laneOf, type Lane } from './strip-model';
 import { useSmoothAngle } from './use-smooth-angle';
 
@@ -32,12 +32,12 @@ export function PlanView({ rig, angleDeg, sizePx, old = false }: PlanViewProps) 
   return (
     <View role="img" aria-label={planWords(rig, angleDeg, old)} style={{ width: sizePx, height: sizePx, opacity: old ? 0.45 : 1 }} testID="plan-view">
       <Svg width={sizePx} height={sizePx} viewBox={`0 0 ${sizePx} ${sizePx}`} aria-hidden>
-        <Circle cx={scale} cy={scale} r={tableRadius * scale} fill="none" stroke={colors.line} strokeWidth={Math.max(2, sizePx / 70)} />
+        <Circle cx={scale} cy={scale} r={layout.orbit * scale} fill="none" stroke={colors.line} strokeWidth={Math.max(2, sizePx / 70)} />
         {layout.keepOut.map(([from, to]) => (
-          <Path key={from} d={arc(px, from, to)} stroke={colors.danger} strokeWidth={4} strokeDasharray="3 3" fill="none" />
+          <Path key={from} d={arc(px, layout.orbit, [from, to])} stroke={colors.danger} strokeWidth={4} strokeDasharray="3 3" fill="none" />
         ))}
         {layout.ticks.map((tick) => (
-          <Tick key={`${tick.name} ${tick.angleDeg}`} lane={tick.lane} from={px(tableRadius - 0.055, tick.angleDeg)} to={px(tableRadius + 0.055, tick.angleDeg)} color={colorOf(tick.lane, colors)} />
+          <Tick key={`${tick.name} ${tick.angleDeg}`} lane={tick.lane} from={px(layout.orbit * 0.94, tick.angleDeg)} to={px(layout.orbit * 1.06, tick.angleDeg)} color={colorOf(tick.lane, colors)} />
         ))}
         <Arm layout={layout} colors={colors} scale={scale} />
         {shownDeg === null || !layout.hasSources ? null : <Sources layout={layout} px={px} angleDeg={shownDeg} scale={scale} color={sourceColor(rig, angleDeg, colors)} />}
@@ -83,9 +83,9 @@ function sourceColor(rig: RigDocument, angleDeg: number | null, colors: ThemeCol
   return station === null ? colors.dim : laneOf(station) === 'other' ? colors.dim : colorOf(laneOf(station), colors);
 }
 
-function arc(px: ToPx, fromDeg: number, toDeg: number): string {
+function arc(px: ToPx, radius: number, [fromDeg, toDeg]: [number, number]): string {
   const steps = Math.max(2, Math.ceil((toDeg - fromDeg) / 3));
-  const points = Array.from({ length: steps + 1 }, (_, index) => px(tableRadius, fromDeg + ((toDeg - fromDeg) * index) / steps));
+  const points = Array.from({ length: steps + 1 }, (_, index) => px(radius, fromDeg + ((toDeg - fromDeg) * index) / steps));
   return points.map(({ x, y }, index) => `${index === 0 ? 'M' : 'L'}${x.toFixed(1)} ${y.toFixed(1)}`).join('');
 }
 

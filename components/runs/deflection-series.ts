@@ -1,6 +1,6 @@
 import { angleRadOfSpot, leverOf } from '@/shared/physics/lever';
 import type { RigDocument } from '@/shared/rig/document';
-import { valueAt, type Series } from '@/components/charts';
+import { valueAt, type Series } from '@/components/charts/curve';
 
 /** Readings of a deflection channel as pendulum angles for drawing. Pure. */
 

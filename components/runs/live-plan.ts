@@ -1,4 +1,4 @@
-import { stepsOfLog, stepsOfPlan, type PlannedStep, type StripStep } from '@/components/charts';
+import { stepsOfLog, stepsOfPlan, type PlannedStep, type StripStep } from '@/components/charts/strip-model';
 import type { RunView, StepRowView } from '@/shared/contracts/runs';
 import { planTimeline } from '@/shared/protocol/timeline';
 

@@ -1,5 +1,5 @@
 import type { RunState, RunSummary, RunView, StepRowView } from '@/shared/contracts/runs';
-import { laneOf, type Lane } from '@/components/charts';
+import { laneOf, type Lane } from '@/components/charts/strip-model';
 import { formatClock } from '@/shared/lib/format-time';
 import type { IconName, Tone } from '@/components/ui';
 

@@ -59,7 +59,7 @@ export function formatDelay(seconds: number): string {
 /** The standard uncertainty of an instant: `± 0.2 ms`, `± 15 µs`, `± 1.2 s`; two digits below 9.5, as u itself is known no better. */
 export function formatTimeUncertainty(uS: number): string {
   if (!Number.isFinite(uS)) return '±\u202f?';
-  const [scale, unit] = uS < 0.000_999_5 ? [1e6, 'µs'] : uS < 0.9995 ? [1e3, 'ms'] : [1, 's'];
+  const [scale, unit] = uS < 0.000_099_5 ? [1e6, 'µs'] : uS < 0.9995 ? [1e3, 'ms'] : [1, 's'];
   const scaled = uS * scale;
   const text = scaled === 0 ? '0' : scaled < 9.95 ? String(Number(scaled.toPrecision(2))) : String(Math.round(scaled));
   return `±${NARROW_SPACE}${part(text, unit)}`;

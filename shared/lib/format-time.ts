@@ -75,6 +75,19 @@ export function formatUtcHonest(utcMs: number, uS: number | null): string {
   return `${two(h)}:${two(min)}:${s.padStart(2, '0')}${digits === '' ? '' : `.${digits}`}`;
 }
 
+/** Local time minus UTC at an instant, ms. */
+export function zoneOffsetMs(utcMs: number, timeZone: string): number {
+  const parts = partsIn(utcMs, timeZone);
+  const number = (name: string) => Number(parts[name]);
+  const local = Date.UTC(number('year'), number('month') - 1, number('day'), number('hour'), number('minute'), number('second'));
+  return local - Math.floor(utcMs / 1000) * 1000;
+}
+
+/** {@link formatUtcHonest} in local time of the zone. */
+export function formatLocalHonest(utcMs: number, uS: number | null, timeZone: string): string {
+  return Number.isFinite(utcMs) ? formatUtcHonest(utcMs + zoneOffsetMs(utcMs, timeZone), uS) : '–';
+}
+
 /** {@link formatUtcHonest} with its uncertainty: `05:32:40.218 63 ± 0.21 ms`. */
 export function formatUtcUncertain(utcMs: number, uS: number | null): string {
   const time = formatUtcHonest(utcMs, uS);

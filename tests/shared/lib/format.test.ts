@@ -2,7 +2,7 @@ import * as fc from 'fast-check';
 import { formatDeflection, formatDeflectionUncertain, formatDegrees } from '@/shared/lib/format-angle';
 import { formatAgo, formatCountdown, formatCountdownWide, formatDelay, formatDuration, formatTimeUncertainty } from '@/shared/lib/format-duration';
 import { formatFixed, formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
-import { formatClock, formatClockWithZone, formatDay, formatUtcHonest, formatUtcUncertain } from '@/shared/lib/format-time';
+import { formatClock, formatClockWithZone, formatDay, formatLocalHonest, formatUtcHonest, formatUtcUncertain, zoneOffsetMs } from '@/shared/lib/format-time';
 import { formatUncertain, parseUncertain, spokenUncertain } from '@/shared/lib/format-uncertain';
 
 const plain = (text: string) => text.replaceAll('\u202f', ' ');
@@ -105,7 +105,8 @@ describe('lengths of time', () => {
     expect(plain(formatDelay(242))).toBe('+4 min 2 s');
     expect(formatDelay(0.0001)).toBe('on time');
     expect(plain(formatAgo(12.9))).toBe('12 s ago');
-    expect(plain(formatTimeUncertainty(0.0002))).toBe('± 200 µs');
+    expect(plain(formatTimeUncertainty(0.00021))).toBe('± 0.21 ms');
+    expect(plain(formatTimeUncertainty(0.0000153))).toBe('± 15 µs');
     expect(plain(formatTimeUncertainty(0.0012))).toBe('± 1.2 ms');
     expect(plain(formatTimeUncertainty(1.25))).toBe('± 1.3 s');
   });
@@ -126,6 +127,8 @@ describe('instants', () => {
     const instant = Date.UTC(2031, 6, 10, 5, 32, 40, 218) + 0.6;
     expect(plain(formatUtcHonest(instant, 0.00021))).toBe('05:32:40.218 60');
     expect(plain(formatUtcUncertain(instant, 0.0015))).toBe('05:32:40.218 6 ± 1.5 ms');
+    expect(plain(formatLocalHonest(instant, 0.0015, 'Asia/Kolkata'))).toBe('11:02:40.218 6');
+    expect(zoneOffsetMs(instant, 'America/St_Johns')).toBe(-2.5 * 3_600_000);
     expect(formatUtcHonest(instant, 1.5)).toBe('05:32:40.2');
     expect(formatUtcHonest(instant, 20)).toBe('05:32:40');
     expect(formatUtcHonest(Date.UTC(2031, 6, 10, 23, 59, 59, 999), 20)).toBe('00:00:00');

@@ -1,0 +1,5 @@
+import { DataScreen } from '@/components/data/data-screen';
+
+export default function Data() {
+  return <DataScreen />;
+}

@@ -1,0 +1,5 @@
+import { RunScreen } from '@/components/runs/run-screen';
+
+export default function Run() {
+  return <RunScreen />;
+}

@@ -1,0 +1,5 @@
+import { RunsScreen } from '@/components/runs/runs-screen';
+
+export default function Runs() {
+  return <RunsScreen />;
+}

@@ -1,0 +1,49 @@
+import { View } from 'react-native';
+import { PlanView } from '@/components/charts';
+import { Label, Num, Panel } from '@/components/ui';
+import type { LiveMessages, RunView, StepRowView } from '@/shared/contracts/runs';
+import { formatDegrees } from '@/shared/lib/format-angle';
+import { formatTimeUncertainty } from '@/shared/lib/format-duration';
+import { formatUtcHonest } from '@/shared/lib/format-time';
+
+interface PlanPanelProps {
+  view: RunView;
+  rows: readonly StepRowView[];
+  beat: LiveMessages['beat'] | null;
+  lost: boolean;
+  large?: boolean;
+}
+
+const sources: Record<StepRowView['angleSource'], string> = { counted: 'counted steps', 'edge-verified': 'proved at the home edge', encoder: 'read by the encoder' };
+
+/** The turntable from above with its angle in figures and the last motion's end with its uncertainty. */
+export function PlanPanel({ view, rows, beat, lost, large = false }: PlanPanelProps) {
+  const moved = rows.findLast((row) => (row.kind === 'swing' || row.kind === 'home') && row.endUtcMs !== null);
+  const angleDeg = beat?.angleDeg ?? moved?.angleEndDeg ?? null;
+  return (
+    <Panel className={large ? 'items-center gap-4' : 'flex-row items-center gap-5'}>
+      <PlanView rig={view.rig} angleDeg={angleDeg} sizePx={large ? 260 : 132} old={lost} />
+      <View className={large ? 'w-full flex-row justify-between gap-4' : 'min-w-0 shrink gap-3'}>
+        <View>
+          <Label>Turntable{lost ? ', last known' : ''}</Label>
+          <Num size={24} tone={lost ? 'dim' : 'text'} testID="turntable-angle">
+            {formatDegrees(angleDeg)}
+          </Num>
+          {moved && large ? <Label>{sources[moved.angleSource]}</Label> : null}
+        </View>
+        {moved?.endUtcMs == null ? null : (
+          <View>
+            <Label>Last motion ended</Label>
+            <Num size={15}>{formatUtcHonest(moved.endUtcMs, moved.uEndS)}</Num>
+            <Label>
+              <Num size={13} tone="dim">
+                {moved.uEndS === null ? '' : formatTimeUncertainty(moved.uEndS)}
+              </Num>{' '}
+              UTC
+            </Label>
+          </View>
+        )}
+      </View>
+    </Panel>
+  );
+}

@@ -1,0 +1,64 @@
+import { useState } from 'react';
+import { View } from 'react-native';
+import { useLab, wordsOf } from '@/components/api';
+import { Body, Label, PressAndKeep, ProblemNotice, Row, Sheet } from '@/components/ui';
+import type { RunView } from '@/shared/contracts/runs';
+import { formatDuration } from '@/shared/lib/format-duration';
+import { formatClockWithZone } from '@/shared/lib/format-time';
+import { stepTitle } from './run-words';
+import { ResumeExpired, resumeOnce } from './use-intervention';
+
+interface ResumeSheetProps {
+  view: RunView;
+  timeZone: string;
+  serverNowMs: number;
+  onClose: () => void;
+}
+
+/** What a resume will do, reviewed before it moves anything. Sent once; never again by itself. */
+export function ResumeSheet({ view, timeZone, serverNowMs, onClose }: ResumeSheetProps) {
+  const { labId } = useLab();
+  const [busy, setBusy] = useState(false);
+  const [problem, setProblem] = useState<string | null>(null);
+  const resume = async () => {
+    setBusy(true);
+    setProblem(null);
+    try {
+      await resumeOnce({ labId, runId: view.id });
+      onClose();
+    } catch (error) {
+      setProblem(error instanceof ResumeExpired ? error.message : wordsOf(error).detail);
+    } finally {
+      setBusy(false);
+    }
+  };
+  const left = view.predictedEndAt === null ? null : (Date.parse(view.predictedEndAt) - serverNowMs) / 1000;
+  const facts: [string, string][] = [
+    ['Rig', view.rigName],
+    ['Protocol', `${view.protocolName}, revision ${view.protocolRevision}`],
+    ['Goes on with', view.current === null ? 'the next step' : stepTitle(view.current)],
+    ['Dwells left', String(Math.max(0, view.dwellsPlanned - view.dwellsDone))],
+    ...(view.predictedEndAt === null || left === null || left < 0 ? [] : [['Ends about', `${formatClockWithZone(Date.parse(view.predictedEndAt), { timeZone, weekday: true })}, in ${formatDuration(left)}`] as [string, string]]),
+  ];
+  return (
+    <Sheet
+      open
+      title="Resume this run"
+      onClose={onClose}
+      testID="resume-sheet"
+      footer={<PressAndKeep label="Resume" icon="start" statement="Nobody is within reach of the turntable; it may move." onConfirm={() => void resume()} busy={busy} testID="resume-confirm" />}
+    >
+      <Body>The source masses will move. Whoever armed the rig answers for it on site.</Body>
+      <View>
+        {facts.map(([name, value], index) => (
+          <Row key={name} last={index === facts.length - 1} className="justify-between">
+            <Label>{name}</Label>
+            <Body className="shrink text-right">{value}</Body>
+          </Row>
+        ))}
+      </View>
+      {problem === null ? null : <ProblemNotice title="Not resumed" detail={problem} />}
+      <Label>A resume counts for 5 s after you let go. It is sent once and never repeated by itself.</Label>
+    </Sheet>
+  );
+}

@@ -1,0 +1,108 @@
+import { useLocalSearchParams } from 'expo-router';
+import { View } from 'react-native';
+import { useLab, wordsOf } from '@/components/api';
+import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, useWide } from '@/components/ui';
+import type { RunView } from '@/shared/contracts/runs';
+import { ControlBar } from './control-bar';
+import { HeldNotice } from './held-notice';
+import { linkAge } from './link-age';
+import { LinkChip, LostNotice } from './link-chip';
+import { serverOffsetMs } from './live-reducer';
+import { LiveStrip } from './live-strip';
+import { PlanPanel } from './plan-panel';
+import { RecentSteps, TextLink } from './recent-steps';
+import { ResultScreen } from './result-screen';
+import { RunHead } from './run-head';
+import { isOver } from './run-words';
+import { useIntervention } from './use-intervention';
+import { useLiveRun, type LiveRun } from './use-live-run';
+import { useNow } from './use-now';
+import { useRunStrip } from './use-run-strip';
+
+const back = { href: '/runs' as const, label: 'Runs' };
+
+/** A run: watched and held or stopped while it goes on, summed up once it is over. */
+export function RunScreen() {
+  const { runId } = useLocalSearchParams<{ runId: string }>();
+  const live = useLiveRun(runId);
+  const { view } = live.state;
+  if (view === null) {
+    return (
+      <Screen title="Run" back={back}>
+        {live.error === null ? <Loading label="Loading the run" /> : <ProblemNotice title="The run could not be loaded" detail={wordsOf(live.error).detail} action={{ label: 'Try again', onPress: live.refresh }} />}
+      </Screen>
+    );
+  }
+  return isOver(view.state) ? <ResultScreen view={view} /> : <LiveScreen view={view} live={live} />;
+}
+
+/** The live part, with its acts always at the bottom. */
+export function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
+  const { labId, timeZone } = useLab();
+  const wide = useWide();
+  const now = useNow(500);
+  const { state } = live;
+  const serverNowMs = now + serverOffsetMs(state);
+  const age = linkAge({ nowMs: now, heardAtMs: state.heardAtMs, beat: state.beat, hasController: !view.rehearsal });
+  const lost = age.grade === 'lost';
+  const { local, tap } = useIntervention({ labId, runId: view.id });
+  const strip = useRunStrip(view.id, state, timeZone);
+  const plan = <PlanPanel view={view} rows={state.rows} beat={state.beat} lost={lost} large={wide} />;
+  const log = <RecentSteps runId={view.id} rows={state.rows} timeZone={timeZone} count={wide ? 7 : 4} />;
+  return (
+    <Screen
+      title={view.rigName}
+      back={back}
+      trailing={<LinkChip age={age} />}
+      footer={<ControlBar view={view} local={local} onTap={tap} timeZone={timeZone} />}
+      asideOnlyWide
+      aside={
+        <>
+          {plan}
+          {log}
+        </>
+      }
+      testID="run-screen"
+    >
+      <RunHead view={view} timeZone={timeZone} serverNowMs={serverNowMs} lost={lost} />
+      <LostNotice age={age} />
+      <HeldNotice view={view} timeZone={timeZone} serverNowMs={serverNowMs} />
+      <LiveStrip strip={strip} timeZone={timeZone} serverNowMs={serverNowMs} title={`${view.rigName}, ${view.protocolName}`} lost={lost} />
+      <AfterDwell view={view} onTap={() => tap('hold-after-dwell')} />
+      {wide ? null : plan}
+      {wide ? null : log}
+      <Facts view={view} />
+    </Screen>
+  );
+}
+
+/** The gentle way to hold: at the end of the dwell, so that its data count in full. */
+function AfterDwell({ view, onTap }: { view: RunView; onTap: () => void }) {
+  if (view.state !== 'running' || view.current === null) return null;
+  if (view.holdAfterDwell) {
+    return (
+      <Panel edge="lamp">
+        <Body>Will hold when this dwell has ended. Nothing is cut short.</Body>
+      </Panel>
+    );
+  }
+  return <Button label="Hold after this dwell" icon="dwell" onPress={onTap} testID="hold-after-dwell" />;
+}
+
+function Facts({ view }: { view: RunView }) {
+  return (
+    <View className="gap-2">
+      <View className="flex-row flex-wrap items-center gap-2">
+        <Chip>
+          {view.protocolName}, revision {view.protocolRevision}
+        </Chip>
+        <Chip>{view.massSetLabel}</Chip>
+        {view.rehearsal ? <Chip tone="lamp">rehearsal</Chip> : null}
+      </View>
+      <View className="flex-row flex-wrap items-center justify-between gap-2">
+        <Label>Started by {view.operator}</Label>
+        <TextLink href={`/runs/${view.id}/data`} label="Deflection data" />
+      </View>
+    </View>
+  );
+}

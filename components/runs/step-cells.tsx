@@ -1,0 +1,90 @@
+import { View } from 'react-native';
+import { Body, Icon, Label, Num, type IconName, type Tone } from '@/components/ui';
+import type { StepRowView } from '@/shared/contracts/runs';
+import { formatDegrees } from '@/shared/lib/format-angle';
+import { formatDelay, formatTimeUncertainty } from '@/shared/lib/format-duration';
+import { formatLocalHonest, formatUtcHonest } from '@/shared/lib/format-time';
+import { stepMark, stepTitle } from './run-words';
+import { outcomeOf } from './step-filter';
+
+export interface TimeBase {
+  /** IANA zone, or null for UTC. */
+  timeZone: string | null;
+}
+
+export const clockText = (utcMs: number, uS: number | null, { timeZone }: TimeBase): string => (timeZone === null ? formatUtcHonest(utcMs, uS) : formatLocalHonest(utcMs, uS, timeZone));
+
+/** Planned to the second, actual with its uncertainty, and the difference, which is the thing to see. */
+export function InstantCell({ plannedUtcMs, actualUtcMs, uS, base }: { plannedUtcMs: number | null; actualUtcMs: number | null; uS: number | null; base: TimeBase }) {
+  const delayS = plannedUtcMs === null || actualUtcMs === null ? null : (actualUtcMs - plannedUtcMs) / 1000;
+  const off = delayS !== null && Math.abs(delayS) >= 1;
+  return (
+    <View>
+      <Num size={15}>{actualUtcMs === null ? 'running' : clockText(actualUtcMs, uS, base)}</Num>
+      <View className="flex-row flex-wrap gap-x-2">
+        {actualUtcMs === null || uS === null ? null : (
+          <Num size={13} tone="dim">
+            {formatTimeUncertainty(uS)}
+          </Num>
+        )}
+        {plannedUtcMs === null ? null : (
+          <Num size={13} tone="dim">
+            plan {clockText(plannedUtcMs, 1.5, base).slice(0, 8)}
+          </Num>
+        )}
+        {delayS === null ? null : (
+          <Num size={13} tone={off ? 'lamp' : 'dim'} strong={off}>
+            {formatDelay(delayS)}
+          </Num>
+        )}
+      </View>
+    </View>
+  );
+}
+
+export function AngleCell({ row }: { row: StepRowView }) {
+  if (row.angleStartDeg === null && row.angleEndDeg === null) return <Label>–</Label>;
+  const moved = row.angleStartDeg !== null && row.angleEndDeg !== null && Math.abs(row.angleEndDeg - row.angleStartDeg) > 0.05;
+  return (
+    <View>
+      <Num size={15}>
+        {moved ? `${formatDegrees(row.angleStartDeg)} → ` : ''}
+        {formatDegrees(row.angleEndDeg ?? row.angleStartDeg, 3)}
+      </Num>
+      <Label>
+        {row.uAngleDeg === null ? '' : `± ${row.uAngleDeg}° · `}
+        {row.angleSource}
+      </Label>
+    </View>
+  );
+}
+
+const outcomeLooks: Record<string, { icon: IconName; tone: Tone }> = {
+  done: { icon: 'tick', tone: 'good' }, running: { icon: 'start', tone: 'lamp' }, 'cut short': { icon: 'warning', tone: 'lamp' }, late: { icon: 'wait', tone: 'lamp' }, skipped: { icon: 'forward', tone: 'dim' }, failed: { icon: 'failed', tone: 'danger' },
+};
+
+export function OutcomeCell({ row }: { row: StepRowView }) {
+  const look = row.good === false ? { icon: 'failed' as const, tone: 'danger' as const } : (outcomeLooks[row.outcome ?? 'running'] ?? { icon: 'note' as const, tone: 'dim' as const });
+  return (
+    <View className="flex-row items-center gap-1.5">
+      <Icon name={look.icon} size={16} tone={look.tone === 'on-lamp' ? 'onLamp' : look.tone} />
+      <Body size={13}>{outcomeOf(row)}</Body>
+    </View>
+  );
+}
+
+export function TitleCell({ row }: { row: StepRowView }) {
+  const mark = stepMark(row);
+  return (
+    <View className="min-w-0 flex-row items-center gap-2.5">
+      <Icon name={mark.icon} size={15} tone={mark.tone === 'on-lamp' ? 'onLamp' : mark.tone} />
+      <View className="min-w-0 shrink">
+        <Body>{stepTitle(row)}</Body>
+        <Label className="font-mono">
+          {row.path}
+          {row.label === '' || row.kind === 'mark' ? '' : ` · ${row.label}`}
+        </Label>
+      </View>
+    </View>
+  );
+}

@@ -1,0 +1,86 @@
+import { useLocalSearchParams, type Href } from 'expo-router';
+import { useMemo, useState } from 'react';
+import { View } from 'react-native';
+import { addressOf, useLab, useLabQuery, wordsOf } from '@/components/api';
+import { Button, Empty, Label, Loading, Panel, ProblemNotice, Screen, Select, Tabs, useWide } from '@/components/ui';
+import { getRun, listSteps, stepsCsv, type StepRowView } from '@/shared/contracts/runs';
+import { zoneName } from '@/shared/lib/format-time';
+import { DownloadLink } from './download-link';
+import { ChainHead } from './event-list';
+import { isOver } from './run-words';
+import { everything, filterChoices, filterSteps, noFilter, type StepFilter } from './step-filter';
+import { StepCards, StepTable } from './step-table';
+import { useEvents } from './use-events';
+
+const everyMs = 4000;
+
+/** The step log of a run: what was planned, what happened, and how well the times are known. */
+export function StepLogScreen() {
+  const { runId } = useLocalSearchParams<{ runId: string }>();
+  const { labId, timeZone } = useLab();
+  const run = useLabQuery(getRun, { params: { runId }, everyMs: everyMs * 2 });
+  const over = run.data !== undefined && isOver(run.data.data.state);
+  const steps = useLabQuery(listSteps, { params: { runId }, ...(over ? {} : { everyMs }) });
+  const events = useEvents(runId, !over);
+  const rows = steps.data?.data.items ?? [];
+  return (
+    <Screen
+      title="Step log"
+      back={{ href: `/runs/${runId}` as Href, label: run.data?.data.rigName ?? 'the run' }}
+      trailing={<DownloadLink address={addressOf(stepsCsv, { params: { labId, runId } })} label="CSV" fileName={`steps-${runId}.csv`} />}
+      testID="step-log"
+    >
+      {steps.isPending ? <Loading label="Loading the step log" /> : null}
+      {steps.isError ? <ProblemNotice title="The step log could not be loaded" detail={wordsOf(steps.error).detail} action={{ label: 'Try again', onPress: () => void steps.refetch() }} /> : null}
+      {steps.isSuccess && rows.length === 0 ? <Empty title="No steps yet">The first row appears when the run begins its first step.</Empty> : null}
+      {rows.length === 0 ? null : <LoggedSteps rows={rows} events={events.data ?? []} timeZone={timeZone} />}
+    </Screen>
+  );
+}
+
+function LoggedSteps({ rows, events, timeZone }: { rows: readonly StepRowView[]; events: NonNullable<ReturnType<typeof useEvents>['data']>; timeZone: string }) {
+  const wide = useWide();
+  const [filter, setFilter] = useState<StepFilter>(noFilter);
+  const [zone, setZone] = useState<'lab' | 'utc'>('lab');
+  const [open, setOpen] = useState<number | null>(null);
+  const shown = useMemo(() => filterSteps(rows, filter), [rows, filter]);
+  const list = { rows: shown, events, base: { timeZone: zone === 'utc' ? null : timeZone }, timeZone, open, onOpen: setOpen };
+  return (
+    <View className="gap-4">
+      <Filters rows={rows} filter={filter} onChange={setFilter} />
+      <View className="flex-row flex-wrap items-center justify-between gap-3">
+        <Label>
+          {shown.length === rows.length ? `${rows.length} rows` : `${shown.length} of ${rows.length} rows`}, times in {zone === 'utc' ? 'UTC' : zoneName(timeZone)}
+        </Label>
+        <Tabs label="Times in" value={zone} onChange={setZone} options={[{ value: 'lab', label: 'Lab time' }, { value: 'utc', label: 'UTC' }]} />
+      </View>
+      {shown.length === 0 ? <Empty title="No row like that" icon="filter" action={{ label: 'Show all rows', onPress: () => setFilter(noFilter) }} /> : wide ? <StepTable {...list} /> : <StepCards {...list} />}
+      <Panel>
+        <ChainHead events={events} />
+      </Panel>
+    </View>
+  );
+}
+
+const optionsOf = (all: string, values: readonly string[]) => [{ value: everything, label: all }, ...values.map((value) => ({ value, label: value }))];
+
+function Filters({ rows, filter, onChange }: { rows: readonly StepRowView[]; filter: StepFilter; onChange: (filter: StepFilter) => void }) {
+  const wide = useWide();
+  const [shown, setShown] = useState(false);
+  const choices = useMemo(() => filterChoices(rows), [rows]);
+  const active = filter !== noFilter && Object.values(filter).some((value) => value !== everything);
+  if (!wide && !shown) return <Button icon="filter" label={active ? 'Filter is on' : 'Filter'} onPress={() => setShown(true)} expanded={false} className="self-start" testID="filter" />;
+  return (
+    <View className="gap-3 wide:flex-row" role="search" aria-label="Filter of the step log">
+      <View className="wide:w-[190px]">
+        <Select label="Kind" value={filter.kind} options={optionsOf('every kind', choices.kind)} onChange={(kind) => onChange({ ...filter, kind })} testID="filter-kind" />
+      </View>
+      <View className="wide:w-[190px]">
+        <Select label="Station" value={filter.station} options={optionsOf('every station', choices.station)} onChange={(station) => onChange({ ...filter, station })} testID="filter-station" />
+      </View>
+      <View className="wide:w-[190px]">
+        <Select label="Outcome" value={filter.outcome} options={optionsOf('every outcome', choices.outcome)} onChange={(outcome) => onChange({ ...filter, outcome })} testID="filter-outcome" />
+      </View>
+    </View>
+  );
+}
