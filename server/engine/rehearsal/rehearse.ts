@@ -1,0 +1,149 @@
+import type { ChainedEvent, ChannelSeries, RunStart, SimulatedRun, StepRow } from '@/shared/archive/run-records';
+import { createSimulatedBalance } from '@/shared/physics/simulated-balance';
+import { motionOf } from '@/shared/protocol/durations';
+import type { TurntableLink } from '../../interfaces/turntable-link';
+import { RunDriver } from '../run-driver';
+import type { RunFacts } from '../run-facts';
+import { VirtualClock } from '../virtual-clock';
+import { DeflectionSeries } from './deflection';
+import { scheduleFaults, SERVER_AWAY_MS } from './rehearsal-faults';
+import type { RehearsalParts } from './rehearsal-parts';
+import { RehearsalStore } from './rehearsal-store';
+
+export interface RehearsalInput {
+  /** With `simulated` set: the recipe. */
+  start: RunStart & { simulated: SimulatedRun };
+  startUtcMs: number;
+}
+
+/** What a rehearsal leaves, all in memory. */
+export interface Rehearsal {
+  outcome: 'finished' | 'held' | 'stopped' | 'failed';
+  facts: RunFacts;
+  steps: StepRow[];
+  events: ChainedEvent[];
+  channels: ChannelSeries[];
+  startedAtUtcMs: number | null;
+  endedAtUtcMs: number;
+  /** Simulated time from the start to the end, s. */
+  simulatedS: number;
+  holds: number;
+}
+
+/** The link is opened this long before the start, so that the run begins on the second. */
+const PREPARE_MS = 3_000;
+/** The pendulum is worked out in pieces of this length. */
+const SAMPLE_BATCH_MS = 1_000;
+/** Longer than 10,000 steps of any use; a protocol that waits for ever ends here. */
+const LONGEST_MS = 400 * 86_400_000;
+
+/**
+ * Runs a protocol on the simulated rig: the engine, the link and the bytes of a real run, on a clock that jumps. There is nobody to
+ * resume, so a hold that does not end by itself ends it. The same input gives the same result.
+ */
+export async function rehearse({ start, startUtcMs }: RehearsalInput, parts: RehearsalParts): Promise<Rehearsal> {
+  const { simulated, rig } = start;
+  const motion = motionOf(rig);
+  const clock = new VirtualClock(startUtcMs - PREPARE_MS, parts.settle);
+  const controller = parts.createController({ clock, rig: motion, seed: simulated.seed });
+  const server = new RehearsalServer(start, { ...parts, clock, newLink: (epoch) => parts.createLink({ factory: controller.factory, clock, rig: motion, epoch }) });
+  await clock.advance(PREPARE_MS);
+
+  const deflection = new DeflectionSeries();
+  const balance = createSimulatedBalance({ rig, bigG: simulated.trueG, seed: simulated.seed, rateHz: simulated.rateHz, startUtcMs });
+  const sample = () => deflection.append(balance.advance({ toUtcMs: clock.utcMs(), angleDegAt: controller.trueAngleDegAt }));
+  const sampleOn = () => {
+    sample();
+    clock.after(SAMPLE_BATCH_MS, sampleOn);
+  };
+  clock.after(SAMPLE_BATCH_MS, sampleOn);
+  scheduleFaults(simulated.faults, { clock, controller, killServer: () => server.kill() });
+  server.driver.start();
+  await clock.advance(LONGEST_MS, () => server.hasEnded());
+  sample();
+  return result(server, deflection.series());
+}
+
+function result(server: RehearsalServer, series: ChannelSeries): Rehearsal {
+  const { driver, store, nowUtcMs } = server;
+  const snapshot = driver.state();
+  const { startedAtUtcMs, endedAtUtcMs } = snapshot.context;
+  const outcome = snapshot.state === 'finished' || snapshot.state === 'stopped' || snapshot.state === 'failed' ? snapshot.state : 'held';
+  const endUtcMs = endedAtUtcMs ?? nowUtcMs;
+  const facts = driver.facts();
+  server.close();
+  return {
+    outcome,
+    facts,
+    steps: store.steps(),
+    events: [...store.events],
+    channels: [series],
+    startedAtUtcMs,
+    endedAtUtcMs: endUtcMs,
+    simulatedS: (endUtcMs - (startedAtUtcMs ?? endUtcMs)) / 1000,
+    holds: store.events.filter(({ kind }) => kind === 'held').length,
+  };
+}
+
+interface ServerParts extends RehearsalParts {
+  clock: VirtualClock;
+  newLink(epoch: number): TurntableLink;
+}
+
+/** The process that drives the run: it can be killed, and another takes the run up from what was saved. */
+class RehearsalServer {
+  readonly store: RehearsalStore;
+  driver: RunDriver;
+  private link: TurntableLink;
+  private epoch = 1;
+  private away = false;
+
+  constructor(
+    private readonly start: RunStart,
+    private readonly parts: ServerParts,
+  ) {
+    this.store = new RehearsalStore(start);
+    this.link = this.openLink();
+    this.driver = this.newDriver(null);
+  }
+
+  get nowUtcMs(): number {
+    return this.parts.clock.utcMs();
+  }
+
+  hasEnded(): boolean {
+    return !this.away && (this.driver.isOver() || this.driver.state().state === 'held');
+  }
+
+  /** As SIGKILL would: nothing is said, nothing saved. */
+  kill(): void {
+    if (this.away) return;
+    this.away = true;
+    this.close();
+    this.parts.clock.after(SERVER_AWAY_MS, () => void this.comeBack());
+  }
+
+  close(): void {
+    this.driver.close();
+    void this.link.close();
+  }
+
+  private async comeBack(): Promise<void> {
+    this.epoch += 1;
+    this.link = this.openLink();
+    this.driver = this.newDriver(await this.store.load());
+    this.away = false;
+    this.driver.recover();
+  }
+
+  private openLink(): TurntableLink {
+    const link = this.parts.newLink(this.epoch);
+    link.open();
+    return link;
+  }
+
+  private newDriver(stored: Awaited<ReturnType<RehearsalStore['load']>>): RunDriver {
+    const { clock, sha256 } = this.parts;
+    return new RunDriver({ start: this.start, stored, store: this.store, link: this.link, clock, sha256, armNow: () => null, perform: () => undefined });
+  }
+}

@@ -1,0 +1,172 @@
+import type { Sha256 } from '@/shared/archive/chain';
+import type { RunStart } from '@/shared/archive/run-records';
+import { checkProtocol } from '@/shared/protocol/check';
+import type { Finding } from '@/shared/protocol/finding';
+import { planTimeline } from '@/shared/protocol/timeline';
+import type { Clock } from '../interfaces/clock';
+import type { RunStore, StoredRun } from '../interfaces/run-store';
+import type { TurntableLink } from '../interfaces/turntable-link';
+import { type Arm, CHART_VERSION, type Effect } from './run-context';
+import { RunDriver, type RunChange } from './run-driver';
+
+export interface SupervisorParts {
+  store: RunStore;
+  clock: Clock;
+  sha256: Sha256;
+  /** The open link of a rig; null while it has none. The same object for as long as a run may use it. */
+  linkOf(rigId: string): TurntableLink | null;
+  armOf(rigId: string): Arm | null;
+  /** Notifications and the end of the arm. */
+  perform(effect: Exclude<Effect, { kind: 'link' }>, start: RunStart): void;
+}
+
+export type StartRefusalCode = 'rig-busy' | 'not-armed' | 'not-ready' | 'protocol-refused' | 'not-yet';
+
+/** A start that is refused, with a sentence that says what would be right. */
+export class StartRefused extends Error {
+  constructor(
+    readonly code: StartRefusalCode,
+    message: string,
+    readonly findings: readonly Finding[] = [],
+  ) {
+    super(message);
+  }
+}
+
+/** A run that this version cannot take up: nothing is done with it, and its rig stays blocked until somebody decides. */
+export interface QuarantinedRun {
+  start: RunStart;
+  why: string;
+}
+
+export type SupervisorListener = (driver: RunDriver, change: RunChange) => void;
+
+/** Owns the drivers: one run to a rig, unfinished ones taken up at boot. */
+export class RigSupervisor {
+  private readonly byRig = new Map<string, RunDriver>();
+  private readonly quarantine = new Map<string, QuarantinedRun>();
+  private readonly listeners = new Set<SupervisorListener>();
+
+  constructor(private readonly parts: SupervisorParts) {}
+
+  /**
+   * Takes up every unfinished run: it is resumed, held or stopped as its protocol says. Call it once, when the links are being opened.
+   */
+  async recover(): Promise<{ taken: RunDriver[]; quarantined: QuarantinedRun[] }> {
+    const taken: RunDriver[] = [];
+    for (const stored of await this.parts.store.unfinished()) {
+      const why = this.unfitness(stored);
+      if (why !== null) this.quarantine.set(stored.start.rigId, { start: stored.start, why });
+      else taken.push(this.drive(stored.start, stored, this.parts.linkOf(stored.start.rigId) as TurntableLink));
+    }
+    for (const driver of taken) driver.recover();
+    return { taken, quarantined: [...this.quarantine.values()] };
+  }
+
+  /**
+   * Why a run may not start now; nothing is changed. What needs the plan comes last.
+   * @throws StartRefused
+   */
+  assertMayStart(start: RunStart): TurntableLink {
+    this.assertFree(start.rigId);
+    const findings = checkProtocol(start.protocol, start.rig);
+    if (findings.length > 0) {
+      const code = findings.every((finding) => finding.code === 'not-yet') ? 'not-yet' : 'protocol-refused';
+      throw new StartRefused(code, findings.map(({ message }) => message).join(' '), findings);
+    }
+    const link = this.readyLink(start.rigId);
+    this.assertArmed(start);
+    return link;
+  }
+
+  /**
+   * Starts a run that the store already holds.
+   * @throws StartRefused
+   */
+  startRun(start: RunStart): RunDriver {
+    const driver = this.drive(start, null, this.assertMayStart(start));
+    driver.start();
+    return driver;
+  }
+
+  /** The run of a rig that has not ended, if this process drives one. */
+  activeOf(rigId: string): RunDriver | null {
+    return this.byRig.get(rigId) ?? null;
+  }
+
+  driverOf(runId: string): RunDriver | null {
+    return [...this.byRig.values()].find((driver) => driver.runId === runId) ?? null;
+  }
+
+  quarantinedOf(rigId: string): QuarantinedRun | null {
+    return this.quarantine.get(rigId) ?? null;
+  }
+
+  onChange(listener: SupervisorListener): () => void {
+    this.listeners.add(listener);
+    return () => this.listeners.delete(listener);
+  }
+
+  /** Resolves when every driver has saved and acted on all it received. */
+  async idle(): Promise<void> {
+    await Promise.all([...this.byRig.values()].map((driver) => driver.idle()));
+  }
+
+  /** Lets go of all runs without touching them; the next process takes them up. */
+  close(): void {
+    for (const driver of this.byRig.values()) driver.close();
+    this.byRig.clear();
+  }
+
+  private unfitness({ start, chartVersion, snapshot }: StoredRun): string | null {
+    if (snapshot !== null && chartVersion !== CHART_VERSION) {
+      return `The run was saved by another version of the run engine (${chartVersion}; this one reads ${CHART_VERSION}). Look at the rig, then end the run.`;
+    }
+    return this.parts.linkOf(start.rigId) === null ? 'The rig has no link any more. Set one up, then start the server again.' : null;
+  }
+
+  private drive(start: RunStart, stored: StoredRun | null, link: TurntableLink): RunDriver {
+    const { store, clock, sha256, armOf, perform } = this.parts;
+    const driver = new RunDriver({
+      start, stored, store, clock, sha256, link,
+      armNow: () => armOf(start.rigId),
+      perform: (effect) => perform(effect, start),
+    });
+    this.byRig.set(start.rigId, driver);
+    driver.onChange((change) => {
+      for (const listener of this.listeners) listener(driver, change);
+      if (driver.isOver() && this.byRig.get(start.rigId) === driver) this.byRig.delete(start.rigId);
+    });
+    return driver;
+  }
+
+  private assertFree(rigId: string): void {
+    const active = this.byRig.get(rigId);
+    if (active !== undefined && !active.isOver()) throw new StartRefused('rig-busy', `The rig is taken by another run (${active.facts().state}). Wait for its end, or stop it.`);
+    const quarantined = this.quarantine.get(rigId);
+    if (quarantined !== undefined) throw new StartRefused('rig-busy', `The rig is blocked by an unfinished run. ${quarantined.why}`);
+  }
+
+  private readyLink(rigId: string): TurntableLink {
+    const link = this.parts.linkOf(rigId);
+    const health = link?.health();
+    const controller = link?.controller() ?? null;
+    if (link === null || health === undefined) throw new StartRefused('not-ready', 'The rig has no link to a controller. Set one up on the rig page.');
+    if (health.condition !== 'ready' || controller === null) throw new StartRefused('not-ready', `The link to the controller is not ready: ${health.detail || health.condition}.`);
+    if (!controller.interlockClosed) throw new StartRefused('not-ready', 'The interlock is open. Close the door, then start.');
+    if (!controller.supplyPresent) throw new StartRefused('not-ready', 'The motor supply is off. Switch it on at the rig, then start.');
+    if (controller.moving) throw new StartRefused('not-ready', 'The turntable is moving. Wait until it stands still, then start.');
+    return link;
+  }
+
+  private assertArmed(start: RunStart): void {
+    if (start.simulated !== null) return;
+    const { arm } = start;
+    const nowUtcMs = this.parts.clock.utcMs();
+    if (arm === null || arm.untilUtcMs <= nowUtcMs) throw new StartRefused('not-armed', 'The rig is not armed. A named person on site has to arm it first.');
+    const { endUtcMs } = planTimeline(start, { utcMs: nowUtcMs, angleDeg: start.rig.motion?.homeDeg ?? 0 });
+    if (arm.untilUtcMs > endUtcMs) return;
+    const until = new Date(arm.untilUtcMs).toISOString();
+    throw new StartRefused('not-armed', `The arm of ${arm.name} ends at ${until}, before the predicted finish at ${new Date(endUtcMs).toISOString()}. Arm the rig until after that.`);
+  }
+}
