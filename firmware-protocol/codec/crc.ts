@@ -7,7 +7,8 @@ const POLYNOMIAL = 0x1021;
 
 const table = Uint16Array.from({ length: 256 }, (_, byte) => {
   let remainder = byte << 8;
-  for (let bit = 0; bit < 8; bit += 1) remainder = remainder & 0x8000 ? ((remainder << 1) ^ POLYNOMIAL) & 0xffff : (remainder << 1) & 0xffff;
+  for (let bit = 0; bit < 8; bit += 1)
+    remainder = remainder & 0x8000 ? ((remainder << 1) ^ POLYNOMIAL) & 0xffff : (remainder << 1) & 0xffff;
   return remainder;
 });
 

@@ -6,7 +6,9 @@ export function decodeEvent(fields: string[]): EventMessage | undefined {
   const number = wholeField(fields[1], GREATEST_EPOCH);
   const atUs = stampField(fields[2]);
   const what = decodeHappening(fields);
-  return number === undefined || number === 0 || atUs === undefined || what === undefined ? undefined : { kind: 'event', number, atUs, what };
+  return number === undefined || number === 0 || atUs === undefined || what === undefined
+    ? undefined
+    : { kind: 'event', number, atUs, what };
 }
 
 function decodeHappening(fields: string[]): Happening | undefined {

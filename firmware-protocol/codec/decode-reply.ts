@@ -20,7 +20,8 @@ export function decodeReply(fields: string[]): Reply | undefined {
   const receivedUs = stampField(fields[3]);
   const turnUs = turnField(fields[4]);
   const body = decodeBody(fields);
-  if (session === undefined || number === undefined || receivedUs === undefined || turnUs === undefined || body === undefined) return undefined;
+  if (session === undefined || number === undefined || receivedUs === undefined || turnUs === undefined || body === undefined)
+    return undefined;
   return { kind: 'reply', session, number, receivedUs, turnUs, body };
 }
 
@@ -45,7 +46,8 @@ function decodeOk(fields: string[]): OkBody | undefined {
   const flags = hexNumberField(fields[8], 3);
   const event = wholeField(fields[9], GREATEST_EPOCH);
   const dropped = wholeField(fields[10], GREATEST_NUMBER);
-  if (state === undefined || position === undefined || flags === undefined || event === undefined || dropped === undefined) return undefined;
+  if (state === undefined || position === undefined || flags === undefined || event === undefined || dropped === undefined)
+    return undefined;
   return { word: 'ok', state, position, flags, event, dropped };
 }
 
@@ -68,7 +70,14 @@ function decodeHi(fields: string[]): HiBody | undefined {
   const capabilities = hexNumberField(fields[10], 4);
   const firmware = fields[11];
   if (major === undefined || minor === undefined || more.length > 0 || boot === undefined || session === undefined) return undefined;
-  if (resolutionUs === undefined || resolutionUs === 0 || capabilities === undefined || firmware === undefined || !/^[a-z0-9.-]{1,12}$/.test(firmware)) return undefined;
+  if (
+    resolutionUs === undefined ||
+    resolutionUs === 0 ||
+    capabilities === undefined ||
+    firmware === undefined ||
+    !/^[a-z0-9.-]{1,12}$/.test(firmware)
+  )
+    return undefined;
   return { word: 'hi', major, minor, boot, session, resolutionUs, capabilities, firmware };
 }
 
@@ -78,6 +87,7 @@ function decodeLimits(fields: string[]): LimitsBody | undefined {
   const speed = rateField(fields[8]);
   const acceleration = rateField(fields[9]);
   const home = rateField(fields[10]);
-  if (least === undefined || greatest === undefined || speed === undefined || acceleration === undefined || home === undefined) return undefined;
+  if (least === undefined || greatest === undefined || speed === undefined || acceleration === undefined || home === undefined)
+    return undefined;
   return { word: 'lim', least, greatest, speed, acceleration, home };
 }

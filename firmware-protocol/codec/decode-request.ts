@@ -10,7 +10,8 @@ export function decodeRequest(fields: string[]): Request | UnusableRequest | und
   const session = identifierField(fields[2]);
   const number = wholeField(fields[3], GREATEST_NUMBER);
   const word = fields[4];
-  if (epoch === undefined || session === undefined || number === undefined || word === undefined || !/^[a-z]+$/.test(word)) return undefined;
+  if (epoch === undefined || session === undefined || number === undefined || word === undefined || !/^[a-z]+$/.test(word))
+    return undefined;
   const order = decodeOrder(word, fields);
   if (order === 'word' || order === 'field') return { kind: 'unusable', epoch, session, number, code: order };
   return { kind: 'request', epoch, session, number, order };
@@ -60,6 +61,14 @@ function decodeMove(fields: string[], given: number): Order | 'field' {
   const speed = rateField(fields[7]);
   const acceleration = rateField(fields[8]);
   const beginUs = fields[9] === 'now' ? null : stampField(fields[9]);
-  if (given !== 5 || tag === undefined || position === undefined || speed === undefined || acceleration === undefined || beginUs === undefined) return 'field';
+  if (
+    given !== 5 ||
+    tag === undefined ||
+    position === undefined ||
+    speed === undefined ||
+    acceleration === undefined ||
+    beginUs === undefined
+  )
+    return 'field';
   return { word: 'move', tag, position, speed, acceleration, beginUs };
 }

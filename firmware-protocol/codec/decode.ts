@@ -22,7 +22,8 @@ export function decodeLine(line: string): Item {
   }
   const bodyLength = text.length - CHECK_LENGTH;
   const check = hexNumberField(text.slice(bodyLength + 1), 4);
-  if (bodyLength < 1 || text.charCodeAt(bodyLength) !== 32 || check === undefined || check !== crc16(text, bodyLength)) return garbage('check', line);
+  if (bodyLength < 1 || text.charCodeAt(bodyLength) !== 32 || check === undefined || check !== crc16(text, bodyLength))
+    return garbage('check', line);
   const fields = text.slice(0, bodyLength).split(' ');
   return decodeFields(fields) ?? garbage('grammar', line);
 }

@@ -1,5 +1,14 @@
 import { crc16, hex4 } from './crc';
-import { NO_SESSION, type EventMessage, type Happening, type Message, type Order, type Reply, type ReplyBody, type Request } from './messages';
+import {
+  NO_SESSION,
+  type EventMessage,
+  type Happening,
+  type Message,
+  type Order,
+  type Reply,
+  type ReplyBody,
+  type Request,
+} from './messages';
 
 /** The line of a message, check word and line feed included (SPEC 1.2). Values must lie in the ranges of SPEC 2. */
 export function encode(message: Message): string {

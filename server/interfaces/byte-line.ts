@@ -18,6 +18,8 @@ export interface ByteLineHandlers {
 export interface ByteLineFactory {
   /** Where the line goes, in words for people. */
   readonly description: string;
+  /** Time of one byte on the wire, ms; absent or 0 where bytes take no time of their own (a pseudo-terminal). */
+  readonly byteTimeMs?: number;
   /** Opens a fresh line. Rejects with an Error whose message says what was tried and what is wrong. */
   open(handlers: ByteLineHandlers): Promise<ByteLine>;
 }

@@ -1,5 +1,15 @@
 import * as fc from 'fast-check';
-import { BOOT_CAUSES, decodeLine, encode, END_CAUSES, hex8, LineSplitter, MAX_LINE_BYTES, STATES, type Message } from '@/firmware-protocol/codec';
+import {
+  BOOT_CAUSES,
+  decodeLine,
+  encode,
+  END_CAUSES,
+  hex8,
+  LineSplitter,
+  MAX_LINE_BYTES,
+  STATES,
+  type Message,
+} from '@/firmware-protocol/codec';
 
 const identifier = fc.integer({ min: 0, max: 0xffffffff }).map(hex8);
 const number = fc.nat(65_535);
@@ -97,7 +107,9 @@ test('every single bit of one line of each kind is guarded', () => {
 
 test('noise yields items with a reason, never an exception and never a message', () => {
   const bytes = fc.array(fc.nat(255), { maxLength: 200 }).map((codes) => String.fromCharCode(...codes));
-  const nearly = fc.array(fc.constantFrom('q', 'r', 'e', ' ', '0', '1', 'move', 'ok', 'A', 'F', '.', '-', '\n', '\r'), { maxLength: 60 }).map((pieces) => pieces.join(''));
+  const nearly = fc
+    .array(fc.constantFrom('q', 'r', 'e', ' ', '0', '1', 'move', 'ok', 'A', 'F', '.', '-', '\n', '\r'), { maxLength: 60 })
+    .map((pieces) => pieces.join(''));
   fc.assert(
     fc.property(fc.oneof(bytes, nearly), (noise) => {
       for (const item of new LineSplitter().push(`${noise}\n`)) expect(['garbage', 'blank']).toContain(item.kind);

@@ -30,7 +30,8 @@ describe('invalid lines', () => {
 
 describe('streams', () => {
   const short = (item: Item) => (item.kind === 'garbage' ? { garbage: item.reason } : item.kind === 'blank' ? { blank: true } : item);
-  const awaited = (item: { message?: string; garbage?: string; blank?: boolean }) => (item.message === undefined ? item : decodeLine(item.message));
+  const awaited = (item: { message?: string; garbage?: string; blank?: boolean }) =>
+    item.message === undefined ? item : decodeLine(item.message);
 
   test.each(streams.vectors.map((vector) => [vector.why, vector] as const))('%s', (_why, vector) => {
     const splitter = new LineSplitter();

@@ -1,0 +1,17 @@
+import type { LimitsBody } from '@/firmware-protocol/codec';
+
+/** What a simulated controller is when it is made. */
+export interface MachineSetting {
+  limits: Omit<LimitsBody, 'word'>;
+  /** True position at the start, microsteps from the home edge. */
+  startSteps: number;
+  homed: boolean;
+  /** Whether the warning of SPEC 11.6 is over already at the start. */
+  warned: boolean;
+  /** Number of starts so far: gives the boot identifier. */
+  bootCount: number;
+  /** How long the controller has been on at the start of the simulation, µs. */
+  uptimeUs: number;
+  version: { major: number; minor: number };
+  firmware: string;
+}

@@ -1,0 +1,123 @@
+import { PROTOCOL_VERSION, type BootCause } from '@/firmware-protocol/codec';
+import type { RigMotion } from '@/shared/rig/document';
+import type { ByteLineFactory } from '../interfaces/byte-line';
+import type { Cancel, Clock } from '../interfaces/clock';
+import { degOfSteps, limitsOf, stepsOfDeg } from './rig-units';
+import { SimulatedLine } from './simulated-line';
+import { SimulatedMachine } from './simulated-machine';
+
+export interface SimulatedControllerOptions {
+  clock: Clock;
+  rig: RigMotion;
+  /** Of the noise on the line and the boot identifiers; default 1. */
+  seed?: number;
+  /** Where the turntable stands at first, deg; default `rig.homeDeg`. */
+  startDeg?: number;
+  /** Whether the position is known at first; default true. */
+  homed?: boolean;
+  /** Whether the 10 s warning before the first motion has been given already; default true. */
+  warned?: boolean;
+  /** Rate error of the controller's crystal, parts per million; default 18. */
+  ratePpm?: number;
+  /** How long the controller has been on at first, s; default 4321.5. */
+  uptimeS?: number;
+  /** Line rate, bit/s; default 115200. */
+  baudRate?: number;
+  version?: { major: number; minor: number };
+}
+
+export interface SimulatedController {
+  factory: ByteLineFactory;
+  /** Where the turntable truly stands (also between counted microsteps), deg. Past instants and the present only. */
+  trueAngleDegAt(utcMs: number): number;
+  openInterlock(): void;
+  closeInterlock(): void;
+  loseSupply(): void;
+  returnSupply(): void;
+  turnArmKey(on: boolean): void;
+  /** Restarts the controller: 1 s deaf, position lost. */
+  reset(cause?: BootCause): void;
+  /** The line is dead for so long. */
+  dropLine(ms: number): void;
+  /** Noise on the line for so long. */
+  garbage(ms: number): void;
+  /** Bytes are kept back for so long, then come all at once. */
+  freeze(ms: number): void;
+  /** The port disappears, or comes back. */
+  unplug(): void;
+  plug(): void;
+  /** The belt slips: the count is wrong by so many microsteps from now on. */
+  slip(steps: number): void;
+}
+
+const DEFAULT_RATE_PPM = 18;
+const DEFAULT_UPTIME_S = 4321.5;
+const US_PER_MS = 1000;
+
+/**
+ * The light simulated controller: the machine of SPEC.md on an injected clock, behind the same bytes as a real one.
+ * Its own clock has an offset (it has been on for a while) and a rate error, as a crystal has.
+ */
+export function createSimulatedController(options: SimulatedControllerOptions): SimulatedController {
+  const { clock, rig, seed = 1 } = options;
+  const bornMs = clock.monotonicMs();
+  const usPerMs = US_PER_MS * (1 + (options.ratePpm ?? DEFAULT_RATE_PPM) * 1e-6);
+  const usAt = (monotonicMs: number) => (monotonicMs - bornMs) * usPerMs;
+  const msAt = (us: number) => bornMs + us / usPerMs;
+  const nowUs = () => usAt(clock.monotonicMs());
+  const setting = {
+    limits: limitsOf(rig),
+    startSteps: stepsOfDeg(rig, options.startDeg ?? rig.homeDeg),
+    homed: options.homed ?? true,
+    warned: options.warned ?? true,
+    bootCount: (seed >>> 0) * 256 + 1,
+    uptimeUs: (options.uptimeS ?? DEFAULT_UPTIME_S) * US_PER_MS * US_PER_MS,
+    version: options.version ?? PROTOCOL_VERSION,
+    firmware: 'simulated',
+  };
+  const line = new SimulatedLine({
+    clock,
+    seed,
+    baudRate: options.baudRate ?? 115_200,
+    description: 'the simulated turntable',
+    toController: (text) => act((us) => machine.receive(text, us)),
+  });
+  const machine = new SimulatedMachine(setting, (text, atUs) => line.fromController(text, msAt(atUs)));
+  let waking: { atUs: number; cancel: Cancel } | null = null;
+
+  /** After anything was done to the machine: be there when its next thing falls due. */
+  function wakeInTime(): void {
+    const dueUs = machine.nextDueUs();
+    if (waking?.atUs === dueUs) return;
+    waking?.cancel();
+    waking = null;
+    if (dueUs === Infinity) return;
+    const cancel = clock.after(msAt(dueUs) - clock.monotonicMs(), () => {
+      waking = null;
+      act((us) => machine.runTo(Math.max(us, dueUs)));
+    });
+    waking = { atUs: dueUs, cancel };
+  }
+
+  function act(deed: (us: number) => void): void {
+    deed(nowUs());
+    wakeInTime();
+  }
+
+  return {
+    factory: line.factory,
+    trueAngleDegAt: (utcMs) => degOfSteps(rig, machine.motion.track.at(usAt(clock.monotonicMs() + (utcMs - clock.utcMs()))).position),
+    openInterlock: () => act((us) => machine.setInput('interlock', false, us)),
+    closeInterlock: () => act((us) => machine.setInput('interlock', true, us)),
+    loseSupply: () => act((us) => machine.setInput('supply', false, us)),
+    returnSupply: () => act((us) => machine.setInput('supply', true, us)),
+    turnArmKey: (on) => act((us) => machine.setInput('key', on, us)),
+    reset: (cause = 'power') => act((us) => machine.reset(us, cause)),
+    dropLine: (ms) => line.drop(ms),
+    garbage: (ms) => line.garble(ms),
+    freeze: (ms) => line.freeze(ms),
+    unplug: () => line.setMissing(true),
+    plug: () => line.setMissing(false),
+    slip: (steps) => act(() => machine.motion.slip(steps)),
+  };
+}

@@ -1,0 +1,300 @@
+import {
+  CAPABILITY,
+  decodeLine,
+  encode,
+  EVENTS_AT_ONCE,
+  hex8,
+  LEASE_MS,
+  NO_SESSION,
+  WARNING_MS,
+  type BootCause,
+  type EndCause,
+  type Happening,
+  type MoveOrder,
+  type NoBody,
+  type OkBody,
+  type Order,
+  type ReplyBody,
+  type Request,
+  type UnusableRequest,
+} from '@/firmware-protocol/codec';
+import type { MachineSetting } from './machine-setting';
+import { EventRing } from './simulated-events';
+import { SimulatedMotion } from './simulated-motion';
+import { no, refusalOf } from './simulated-refusals';
+import { okBody, type MachineFacts } from './simulated-report';
+import { SessionDesk } from './simulated-session';
+
+type StopOrder = Extract<Order, { word: 'hold' | 'stop' | 'off' }>;
+type MotionOrder = MoveOrder | { word: 'home'; tag: string };
+type SessionOrder = Exclude<Order, StopOrder | { word: 'ident' | 'hello' }>;
+
+const RESOLUTION_US = 4;
+const TURN_US = 92;
+const BOOT_US = 1_000_000;
+const MS = 1000;
+const EVERYTHING = Object.values(CAPABILITY).reduce((sum, bit) => sum | bit, 0);
+
+/**
+ * The controller of SPEC.md as a machine without a clock: it is told what arrives when, and tells what it sends when.
+ * Times are microseconds of an own scale that a reset does not break; stamps count from the last start.
+ */
+export class SimulatedMachine {
+  readonly motion: SimulatedMotion;
+  private readonly inputs = { interlock: true, supply: true, key: true };
+  private readonly desk = new SessionDesk();
+  private readonly ring = new EventRing();
+  private bootCount: number;
+  private bootUs: number;
+  private startsAtUs = -Infinity;
+  private booting: BootCause | null = null;
+  private motionEnded = false;
+  private warningDue: boolean;
+  private freeDriversAtRest = false;
+  private leaseUntilUs = -Infinity;
+  private dropped = 0;
+  private nowUs = 0;
+
+  /** `send`: one line, line feed included, that the controller begins to send at `atUs`. */
+  constructor(
+    private readonly setting: MachineSetting,
+    private readonly send: (line: string, atUs: number) => void,
+  ) {
+    this.bootCount = setting.bootCount;
+    this.bootUs = -setting.uptimeUs;
+    this.warningDue = !setting.warned;
+    const emit = (what: Happening, atUs: number) => this.happen(what, atUs);
+    this.motion = new SimulatedMotion({
+      limits: setting.limits,
+      startSteps: setting.startSteps,
+      homed: setting.homed,
+      emit,
+      hindrance: () => this.hindrance(),
+    });
+    this.ring.note({ word: 'boot', cause: 'power' }, 0);
+  }
+
+  /** When something happens next without anything arriving. */
+  nextDueUs(): number {
+    return this.booting === null ? Math.min(this.motion.nextDueUs(), this.leaseDueUs()) : this.startsAtUs;
+  }
+
+  /** Lets everything happen that is due up to `us`, each at its own time. */
+  runTo(us: number): void {
+    for (let due = this.nextDueUs(); due <= us; due = this.nextDueUs()) {
+      this.nowUs = Math.max(this.nowUs, due);
+      if (this.booting !== null) this.start(this.booting);
+      else if (this.leaseDueUs() <= this.motion.nextDueUs()) this.lapse();
+      else this.motion.runNext();
+    }
+    this.nowUs = Math.max(this.nowUs, us);
+  }
+
+  /** A line whose line feed arrives at `us`. */
+  receive(line: string, us: number): void {
+    this.runTo(us);
+    if (this.booting !== null) return;
+    const item = decodeLine(line);
+    if (item.kind === 'request') this.obey(item, line);
+    else if (item.kind === 'unusable') this.answerSession(item, line, () => no(item.code));
+    else if (item.kind !== 'blank') this.dropped = (this.dropped + 1) & 0xffff;
+  }
+
+  /** SPEC 11.1 to 11.3. True: interlock closed, supply present, arm key on. */
+  setInput(input: keyof SimulatedMachine['inputs'], on: boolean, us: number): void {
+    this.runTo(us);
+    const changed = on !== this.inputs[input];
+    this.inputs[input] = on;
+    if (this.booting !== null || !changed) return;
+    if (input === 'key') return this.happen({ word: 'key', on }, us);
+    this.happen(input === 'interlock' ? { word: 'interlock', closed: on } : { word: 'supply', present: on }, us);
+    if (on) return;
+    if (input === 'supply') return this.motion.cutOff(us, 'supply');
+    this.leaseUntilUs = us;
+    this.warningDue = true;
+    this.motion.brake(us, 'interlock', this.setting.limits.acceleration);
+  }
+
+  /** The controller restarts; it hears nothing until it has started again. */
+  reset(us: number, cause: BootCause): void {
+    this.runTo(us);
+    this.motion.forget(us);
+    this.startsAtUs = us + BOOT_US;
+    this.booting = cause;
+    this.desk.forget();
+    this.ring.clear();
+    this.leaseUntilUs = -Infinity;
+    this.freeDriversAtRest = false;
+  }
+
+  private start(cause: BootCause): void {
+    this.bootUs = this.startsAtUs;
+    this.booting = null;
+    this.bootCount += 1;
+    this.dropped = 0;
+    this.motionEnded = false;
+    this.warningDue = true;
+    this.happen({ word: 'boot', cause }, this.bootUs);
+  }
+
+  /** When the lease will lapse in a way that matters (SPEC 10.2). */
+  private leaseDueUs(): number {
+    const { state } = this.motion;
+    return state === 'rest' || state === 'braking' ? Infinity : this.leaseUntilUs;
+  }
+
+  private lapse(): void {
+    const us = this.nowUs;
+    this.happen({ word: 'lease', position: this.motion.position(us) }, us);
+    this.motion.brake(us, 'lease', null);
+  }
+
+  private hindrance(): EndCause | null {
+    if (!this.leaseLive()) return 'lease';
+    if (!this.inputs.interlock) return 'interlock';
+    return this.inputs.supply ? null : 'supply';
+  }
+
+  private leaseLive(): boolean {
+    return this.nowUs < this.leaseUntilUs;
+  }
+
+  private obey(request: Request, line: string): void {
+    const { order } = request;
+    switch (order.word) {
+      case 'ident':
+        return void this.answer(request, this.greeting(NO_SESSION));
+      case 'hello':
+        return void this.answer(request, this.hello(request.epoch));
+      case 'hold':
+      case 'stop':
+      case 'off':
+        return this.obeyStop(request, order, line);
+      default:
+        return this.answerSession(request, line, () => this.carryOut(order));
+    }
+  }
+
+  private answerSession(request: Request | UnusableRequest, line: string, carryOut: () => ReplyBody): void {
+    const admission = this.desk.admit(request, line);
+    if (admission.kind === 'repetition') return this.send(admission.reply, this.nowUs + TURN_US);
+    if (admission.kind === 'refused') return void this.answer(request, admission.body);
+    const body = carryOut();
+    this.desk.keep(request, line, this.answer(request, body));
+    if (request.kind === 'request' && request.order.word === 'events' && body.word === 'ok') this.sendAgain(request.order.from);
+  }
+
+  /** SPEC 9.4: in every state, from everyone; only a true repetition does nothing. */
+  private obeyStop(request: Request, order: StopOrder, line: string): void {
+    const repetition = this.desk.repetition(request, line);
+    if (repetition?.kind === 'repetition') return this.send(repetition.reply, this.nowUs + TURN_US);
+    this.stop(order);
+    this.desk.keep(request, line, this.answer(request, this.report()));
+  }
+
+  private stop(order: StopOrder): void {
+    const us = this.nowUs;
+    this.leaseUntilUs = us;
+    if (order.word === 'off') return this.motion.cutOff(us, 'off');
+    if (order.word === 'hold') return this.motion.brake(us, 'hold', null);
+    this.motionEnded = true;
+    if (order.drivers === 'free') this.freeDriversAtRest = true;
+    this.motion.brake(us, 'stop', this.setting.limits.acceleration);
+    this.releaseAtRest();
+  }
+
+  private releaseAtRest(): void {
+    if (!this.freeDriversAtRest || this.motion.state !== 'rest') return;
+    this.freeDriversAtRest = false;
+    this.motion.release();
+  }
+
+  private hello(epoch: number): ReplyBody {
+    if (epoch > this.desk.highestEpoch) this.leaseUntilUs = this.nowUs;
+    const session = this.desk.open(epoch, this.bootCount);
+    if (session === null) return no('epoch', this.desk.highestEpoch);
+    this.motionEnded = false;
+    if (this.motion.state === 'waiting') this.motion.brake(this.nowUs, 'session', null);
+    return this.greeting(session);
+  }
+
+  private greeting(session: string): ReplyBody {
+    const { version, firmware } = this.setting;
+    return { word: 'hi', ...version, boot: hex8(this.bootCount), session, resolutionUs: RESOLUTION_US, capabilities: EVERYTHING, firmware };
+  }
+
+  private carryOut(order: SessionOrder): ReplyBody {
+    switch (order.word) {
+      case 'status':
+        return this.report();
+      case 'renew':
+        this.leaseUntilUs = this.nowUs + LEASE_MS * MS;
+        return this.report();
+      case 'limits':
+        return { word: 'lim', ...this.setting.limits };
+      case 'events':
+        return order.from < this.ring.oldest || order.from > this.ring.newest ? no('gone', this.ring.oldest) : this.report();
+      case 'home':
+      case 'move':
+        return this.refusal(order) ?? this.accept(order);
+    }
+  }
+
+  private refusal(order: MotionOrder): NoBody | null {
+    const aheadMs = order.word === 'move' && order.beginUs !== null ? (order.beginUs + this.bootUs - this.nowUs) / MS : null;
+    return refusalOf(order, { ...this.facts(), limits: this.setting.limits, lastTag: this.motion.lastTag, aheadMs });
+  }
+
+  private accept(order: MotionOrder): ReplyBody {
+    if (this.warningDue) this.happen({ word: 'warn', tag: order.tag }, this.nowUs);
+    const soonestUs = this.nowUs + (this.warningDue ? WARNING_MS * MS : 0);
+    const beginUs = order.word === 'move' && order.beginUs !== null ? order.beginUs + this.bootUs : soonestUs;
+    this.motion.accept(order, beginUs);
+    if (beginUs <= this.nowUs) this.motion.runNext();
+    return this.report();
+  }
+
+  private report(): OkBody {
+    return okBody(this.facts());
+  }
+
+  private facts(): MachineFacts {
+    const { motion, inputs } = this;
+    return {
+      state: motion.state,
+      position: motion.position(this.nowUs),
+      positionKnown: motion.known,
+      interlockClosed: inputs.interlock,
+      supplyPresent: inputs.supply,
+      armKey: inputs.key,
+      driversOn: motion.driversOn,
+      homeFlag: motion.covered,
+      leaseLive: this.leaseLive(),
+      motionEnded: this.motionEnded,
+      warningDue: this.warningDue,
+      event: this.ring.newest,
+      dropped: this.dropped,
+    };
+  }
+
+  /** Sends a reply and gives its line. */
+  private answer({ session, number }: { session: string; number: number }, body: ReplyBody): string {
+    const reply = encode({ kind: 'reply', session, number, receivedUs: this.stampUs(this.nowUs), turnUs: TURN_US, body });
+    this.send(reply, this.nowUs + TURN_US);
+    return reply;
+  }
+
+  private stampUs(us: number): number {
+    return Math.max(0, Math.round(us - this.bootUs));
+  }
+
+  private happen(what: Happening, us: number): void {
+    if (what.word === 'began') this.warningDue = false;
+    this.send(encode(this.ring.note(what, this.stampUs(us))), us);
+    if (what.word === 'ended') this.releaseAtRest();
+  }
+
+  private sendAgain(from: number): void {
+    for (const event of this.ring.from(from, EVENTS_AT_ONCE)) this.send(encode(event), this.nowUs + TURN_US);
+  }
+}

@@ -1,0 +1,221 @@
+import type { EndCause, Happening, LimitsBody, MachineState, MoveOrder } from '@/firmware-protocol/codec';
+import { brakeStretches, rampStretches, reachedUs, Track, type Stretch } from './simulated-track';
+
+export interface MotionSetting {
+  limits: Omit<LimitsBody, 'word'>;
+  /** True position at the start, microsteps from the home edge. */
+  startSteps: number;
+  homed: boolean;
+  emit: (what: Happening, atUs: number) => void;
+  /** SPEC 8.2: tested again at the first step; null when the motion may begin. */
+  hindrance: () => EndCause | null;
+}
+
+/** What the table is doing for one `home` or `move`. */
+interface Active {
+  order: MoveOrder | { word: 'home'; tag: string };
+  state: 'waiting' | 'moving' | 'homing' | 'braking';
+  beginUs: number;
+  /** Why it will have ended when the present leg is over. */
+  cause: EndCause;
+  homing: 'search' | 'past' | 'below' | 'edge';
+  acceleration: number;
+  leg: Stretch[];
+  endUs: number;
+  edgeUs: number | null;
+}
+
+const MILLI = 1000;
+/** The last approach of homing starts at least so far below the edge, microsteps. */
+const CLEARANCE_STEPS = 8;
+const TINY_STEPS = 1e-6;
+
+/**
+ * The moving part of the simulated controller: trapezoids, braking, homing, the home flag (SPEC 8, 9, 11.4). The flag
+ * covers all places below true position 0. What is counted may differ from what is true by `zero`.
+ */
+export class SimulatedMotion {
+  readonly track: Track;
+  known: boolean;
+  driversOn: boolean;
+  covered: boolean;
+  /** SPEC 3.8: tag of the last order accepted since the start. */
+  lastTag: string | null = null;
+  private zero = 0;
+  private active: Active | null = null;
+
+  constructor(private readonly setting: MotionSetting) {
+    this.track = new Track(setting.startSteps);
+    this.known = setting.homed;
+    this.driversOn = setting.homed;
+    this.covered = setting.startSteps < 0;
+  }
+
+  get state(): MachineState {
+    return this.active?.state ?? 'rest';
+  }
+
+  /** Counted position (SPEC 5.4): whole steps already made; null while unknown. */
+  position(us: number): number | null {
+    return this.known ? this.steps(us) - this.zero : null;
+  }
+
+  accept(order: Active['order'], beginUs: number): void {
+    const { acceleration: cap } = this.setting.limits;
+    const acceleration = (order.word === 'move' ? order.acceleration : cap) / MILLI;
+    this.lastTag = order.tag;
+    this.active = {
+      order,
+      state: 'waiting',
+      beginUs,
+      cause: 'done',
+      homing: 'search',
+      acceleration,
+      leg: [],
+      endUs: Infinity,
+      edgeUs: null,
+    };
+  }
+
+  /** Controller time of the next thing that happens by itself. */
+  nextDueUs(): number {
+    const active = this.active;
+    if (active === null) return Infinity;
+    return active.state === 'waiting' ? active.beginUs : Math.min(active.edgeUs ?? Infinity, active.endUs);
+  }
+
+  /** Lets the next thing happen, at its own time. */
+  runNext(): void {
+    const active = this.active;
+    if (active === null) return;
+    if (active.state === 'waiting') return this.begin(active);
+    if (active.edgeUs !== null && active.edgeUs <= active.endUs) return this.passEdge(active, active.edgeUs);
+    this.endLeg(active);
+  }
+
+  /** SPEC 9.1, 9.2, 10.2, 11.1: cancels what waits, decelerates what moves. `acceleration` null: that of the motion. */
+  brake(us: number, cause: EndCause, acceleration: number | null): void {
+    const active = this.active;
+    if (active === null) return;
+    if (active.state === 'waiting') return this.finish(active, us, cause);
+    const steepness = Math.max(acceleration === null ? 0 : acceleration / MILLI, active.acceleration);
+    if (active.state !== 'braking' || steepness > active.acceleration)
+      this.setLeg(active, us, brakeStretches(this.track.at(us), steepness, us));
+    if (active.state !== 'braking' || cause !== 'lease') active.cause = cause;
+    active.state = 'braking';
+    active.acceleration = steepness;
+  }
+
+  /** Pulses end at once: supply lost, `off`, reset. The position is unknown from here on (SPEC 8.7). */
+  cutOff(us: number, cause: EndCause): void {
+    this.track.cut(us, this.steps(us));
+    const active = this.active;
+    this.release();
+    if (active !== null) this.finish(active, us, cause);
+  }
+
+  /** Drivers off at standstill. */
+  release(): void {
+    this.known = false;
+    this.driversOn = false;
+  }
+
+  /** A reset forgets the order and the count, without a word (SPEC 7.3). */
+  forget(us: number): void {
+    this.track.cut(us, this.steps(us));
+    this.zero = this.steps(us);
+    this.active = null;
+    this.lastTag = null;
+    this.release();
+  }
+
+  /** The count is wrong by so many steps from now on, as after a slipped belt. */
+  slip(steps: number): void {
+    this.zero += steps;
+  }
+
+  private steps(us: number): number {
+    const { position, speed } = this.track.at(us);
+    return speed < 0 ? Math.ceil(position - TINY_STEPS) + 0 : Math.floor(position + TINY_STEPS);
+  }
+
+  private begin(active: Active): void {
+    const us = active.beginUs;
+    const { order } = active;
+    const hindrance = this.setting.hindrance();
+    if (hindrance !== null) return this.finish(active, us, hindrance);
+    this.driversOn = true;
+    active.state = order.word === 'home' ? 'homing' : 'moving';
+    this.setting.emit({ word: 'began', tag: order.tag, position: this.position(us) }, us);
+    if (order.word === 'home') return this.search(active, us);
+    this.setLeg(active, us, this.rampTo(order.position + this.zero, { speed: order.speed, acceleration: order.acceleration }, us));
+  }
+
+  private search(active: Active, us: number): void {
+    const { least, greatest } = this.setting.limits;
+    const travel = (greatest - least + 1) * (this.covered ? 1 : -1);
+    this.setLeg(active, us, this.homeRamp(this.steps(us) + travel, us));
+  }
+
+  private homeRamp(to: number, us: number): Stretch[] {
+    return this.rampTo(to, { speed: this.setting.limits.home, acceleration: this.setting.limits.acceleration }, us);
+  }
+
+  private rampTo(to: number, { speed, acceleration }: { speed: number; acceleration: number }, startUs: number): Stretch[] {
+    return rampStretches({ from: this.steps(startUs), to, speed: speed / MILLI, acceleration: acceleration / MILLI, startUs });
+  }
+
+  private setLeg(active: Active, us: number, leg: Stretch[]): void {
+    this.track.cut(us, this.track.at(us).position);
+    this.track.add(leg);
+    active.leg = leg;
+    active.endUs = leg.at(-1)?.toUs ?? us;
+    active.edgeUs = this.nextEdgeUs(leg);
+  }
+
+  private nextEdgeUs(leg: readonly Stretch[]): number | null {
+    const first = leg[0];
+    const last = leg.at(-1);
+    if (first === undefined || last === undefined) return null;
+    const up = last.to > first.from;
+    if (this.covered && up && last.to >= 0) return reachedUs(leg, 0);
+    if (!this.covered && !up && last.to <= -1) return reachedUs(leg, -1);
+    return null;
+  }
+
+  private passEdge(active: Active, us: number): void {
+    this.covered = !this.covered;
+    active.edgeUs = null;
+    const at = this.covered ? -1 : 0;
+    this.setting.emit({ word: 'edge', position: this.known ? at - this.zero : null, direction: this.covered ? 'cw' : 'ccw' }, us);
+    if (active.state !== 'homing' || active.homing !== 'search') return;
+    active.homing = 'past';
+    this.setLeg(active, us, brakeStretches(this.track.at(us), active.acceleration, us));
+  }
+
+  private endLeg(active: Active): void {
+    const us = active.endUs;
+    if (active.state !== 'homing') return this.finish(active, us, active.cause);
+    switch (active.homing) {
+      case 'search':
+        this.known = false;
+        return this.finish(active, us, 'search');
+      case 'past':
+        active.homing = 'below';
+        return this.setLeg(active, us, this.homeRamp(-(Math.abs(this.steps(us)) + CLEARANCE_STEPS), us));
+      case 'below':
+        active.homing = 'edge';
+        return this.setLeg(active, us, this.homeRamp(0, us));
+      case 'edge':
+        this.setting.emit({ word: 'homed', tag: active.order.tag, position: this.known ? 0 - this.zero : null }, us);
+        this.zero = 0;
+        this.known = true;
+        this.finish(active, us, 'done');
+    }
+  }
+
+  private finish(active: Active, us: number, cause: EndCause): void {
+    this.active = null;
+    this.setting.emit({ word: 'ended', tag: active.order.tag, position: this.position(us), cause }, us);
+  }
+}

@@ -1,0 +1,27 @@
+import { FLAG, type MachineState, type OkBody } from '@/firmware-protocol/codec';
+
+/** What an `ok` reply tells of the controller. */
+export interface MachineFacts {
+  state: MachineState;
+  position: number | null;
+  positionKnown: boolean;
+  interlockClosed: boolean;
+  supplyPresent: boolean;
+  armKey: boolean;
+  driversOn: boolean;
+  homeFlag: boolean;
+  leaseLive: boolean;
+  motionEnded: boolean;
+  warningDue: boolean;
+  event: number;
+  dropped: number;
+}
+
+const FLAGS = Object.entries(FLAG) as [keyof typeof FLAG, number][];
+
+/** SPEC 5.2 and 5.4. */
+export function okBody(facts: MachineFacts): OkBody {
+  let flags = 0;
+  for (const [name, bit] of FLAGS) if (facts[name]) flags |= bit;
+  return { word: 'ok', state: facts.state, position: facts.position, flags, event: facts.event, dropped: facts.dropped };
+}
