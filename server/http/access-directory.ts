@@ -10,6 +10,8 @@ export interface AccessSource {
   ofLabs(labIds: readonly string[]): Promise<{ sessions: Session[]; users: { id: string; name: string; email: string }[]; memberships: (Membership & { userId: string })[] }>;
 }
 
+export type EndedAccess = { sessionId: string } | { userId: string };
+
 interface Copy {
   sessions: Map<string, Session>;
   users: Map<string, { id: string; name: string; email: string }>;
@@ -29,6 +31,8 @@ const emptyCopy = (): Copy => ({ sessions: new Map(), users: new Map(), membersh
  */
 export class AccessDirectory {
   private copy = emptyCopy();
+  private watched: ReadonlySet<string> = new Set();
+  private readonly listeners = new Set<(ended: EndedAccess) => void>();
 
   constructor(
     private readonly parts: { source: AccessSource; sessions: SessionPort; clock: Clock; sha256: (text: string) => string },
@@ -39,12 +43,18 @@ export class AccessDirectory {
     const session = await this.parts.sessions.validate(token);
     if (session === null) return null;
     const user = await this.parts.source.user(session.userId);
+    if (user !== null && this.watched.size > 0) {
+      this.copy.sessions.set(session.id, session);
+      this.copy.users.set(user.id, user);
+    }
     return user === null ? null : { userId: user.id, name: user.name, email: user.email, session, token };
   }
 
   /** Role of an account in a lab, or null for a stranger. */
-  membership(userId: string, labId: string): Promise<Membership | null> {
-    return this.parts.source.membership(userId, labId);
+  async membership(userId: string, labId: string): Promise<Membership | null> {
+    const membership = await this.parts.source.membership(userId, labId);
+    if (membership !== null && this.watched.has(labId)) this.copy.memberships.set(membershipKey(userId, labId), membership);
+    return membership;
   }
 
   /** Caller and role out of memory alone; null when the copy does not hold them. */
@@ -59,6 +69,7 @@ export class AccessDirectory {
 
   /** Takes a fresh copy for the labs with an active run; keeps the old one when the database does not answer. */
   async refresh(labIds: readonly string[]): Promise<void> {
+    this.watched = new Set(labIds);
     if (labIds.length === 0) {
       this.copy = emptyCopy();
       return;
@@ -73,14 +84,23 @@ export class AccessDirectory {
     };
   }
 
+  /** Tells when a session or all of an account's access has ended, so that its streams can be closed. */
+  onEnded(listener: (ended: EndedAccess) => void): () => void {
+    this.listeners.add(listener);
+    return () => this.listeners.delete(listener);
+  }
+
   /** Forgets an ended session at once. */
   forgetSession(token: string): void {
-    this.copy.sessions.delete(this.parts.sha256(token));
+    const sessionId = this.parts.sha256(token);
+    this.copy.sessions.delete(sessionId);
+    for (const listener of this.listeners) listener({ sessionId });
   }
 
   /** Forgets all that is remembered of an account, after its role, membership or password changed. */
   forgetUser(userId: string): void {
     for (const [id, session] of this.copy.sessions) if (session.userId === userId) this.copy.sessions.delete(id);
     for (const key of this.copy.memberships.keys()) if (key.startsWith(`${userId} `)) this.copy.memberships.delete(key);
+    for (const listener of this.listeners) listener({ userId });
   }
 }

@@ -1,12 +1,16 @@
 import type { Logger } from 'pino';
+import type { RigSupervisor } from '../engine/rig-supervisor';
+import type { ArmKeeper } from '../interfaces/arm-keeper';
 import type { Clock } from '../interfaces/clock';
 import type { IdempotencyPort } from '../interfaces/idempotency';
 import type { MailPort } from '../interfaces/mail';
+import type { RigStations } from '../interfaces/rig-stations';
 import type { SampleStore } from '../interfaces/sample-store';
 import type { ServerConfig } from '../interfaces/server-config';
 import type { SessionPort } from '../interfaces/sessions';
 import type { Connection } from '../store/database';
 import type { AccessDirectory } from './access-directory';
+import type { LiveHub } from './live/live-hub';
 
 /** Everything a route may use; built once by `server/boot/build-server.ts`. */
 export interface Services {
@@ -25,6 +29,10 @@ export interface Services {
   idempotency: IdempotencyPort;
   mail: MailPort;
   samples: SampleStore;
+  stations: RigStations;
+  arms: ArmKeeper;
+  supervisor: RigSupervisor;
+  live: LiveHub;
   /** Lets everything else have a turn: long work calls it between its parts, so that hold and stop never wait for it. */
   breathe(): Promise<void>;
   /** Tells the workers that a job was queued, so that it need not wait for their next look. */

@@ -71,6 +71,7 @@ const sessionRoutes = [
   mount(contracts.requestPasswordReset, async ({ body, req, res, services }) => {
     const outcome = await resets.requestPasswordReset(authOf(services), { email: body.email, ip: ipOf(req), origin: originForLinks(req, services.config) });
     if (outcome.kind === 'wait') throw tooMany(res, outcome, 'Too many new passwords were asked for.');
+    services.pokeJobs();
     return { sent: true as const };
   }),
 
@@ -80,6 +81,7 @@ const sessionRoutes = [
     if (outcome.kind === 'unknown-token') throw new ProblemError('not-found', 'This link was used before or is too old. Ask for a new one.');
     if (outcome.kind === 'weak') throw invalidField('password', outcome.why);
     services.access.forgetUser(outcome.userId);
+    services.pokeJobs();
     return undefined;
   }),
 ];
@@ -111,6 +113,7 @@ const invitationRoutes = [
     if (outcome.kind === 'wait') throw tooMany(res, outcome, 'This lab sent very many invitations.');
     if (outcome.kind === 'is-member') throw new ProblemError('already-exists', `${body.email} is a member of ${membership.labName} already. Change the role in the list of members.`);
     if (outcome.kind === 'is-invited') throw new ProblemError('already-exists', `${body.email} has an open invitation. Withdraw it first to send another.`);
+    services.pokeJobs();
     return invitationViewOf(outcome.invitation);
   }),
 

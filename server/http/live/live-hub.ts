@@ -1,0 +1,194 @@
+import type { Response } from 'express';
+import type { ChainedEvent, StepRow } from '@/shared/archive/run-records';
+import type { LiveMessages, RunView } from '@/shared/contracts/runs';
+import type { Cancel, Clock } from '@/server/interfaces/clock';
+import { ProblemError } from '../problem-error';
+import type { SignedIn } from '../route-context';
+import { EventStream } from './event-stream';
+
+export interface LiveRunKey {
+  labId: string;
+  runId: string;
+  rigId: string;
+}
+
+/** What a saved transition of a run changed. */
+export interface LiveChange {
+  events: readonly ChainedEvent[];
+  steps: readonly StepRow[];
+  view: RunView;
+}
+
+export type LiveSamples = LiveMessages['samples'];
+
+export interface LiveSource {
+  view(run: LiveRunKey): Promise<RunView | null>;
+  /** Events after `afterSeq`, oldest first, at most `limit`. */
+  events(run: LiveRunKey, page: { afterSeq: number; limit: number }): Promise<ChainedEvent[]>;
+  steps(run: LiveRunKey): Promise<StepRow[]>;
+  beat(run: LiveRunKey): Omit<LiveMessages['beat'], 'serverAt'>;
+  /** Whether the reader may still see this lab. */
+  mayStillRead(reader: SignedIn, labId: string): Promise<boolean>;
+}
+
+interface Reader {
+  run: LiveRunKey;
+  me: SignedIn;
+  stream: EventStream;
+  /** Changes that came while the gap was being filled; null once it is. */
+  waiting: LiveChange[] | null;
+  /** Last event sent. */
+  sentSeq: number;
+  samples: LiveSamples[];
+}
+
+const beatMs = 1000;
+const retryMs = 2000;
+const commentEveryBeats = 15;
+const checkEveryBeats = 30;
+/** A longer gap is answered by a snapshot. */
+const longestGap = 1000;
+
+/** All open live streams of this process: filled from the database, then fed by what the engine saves. */
+export class LiveHub {
+  private readonly readers = new Set<Reader>();
+  private beats = 0;
+  private cancelBeat: Cancel | null = null;
+
+  constructor(private readonly parts: { source: LiveSource; clock: Clock; streamsPerUser: number }) {}
+
+  /**
+   * Opens a stream on an answer. After `lastEventId` nothing of the chain is missed: the gap is filled from the database,
+   * or, where it is too long, answered by a snapshot alone.
+   */
+  async open(res: Response, stream: { run: LiveRunKey; me: SignedIn; lastEventId: number | null }): Promise<void> {
+    const { run, me, lastEventId } = stream;
+    const open = [...this.readers].filter((reader) => reader.me.userId === me.userId).length;
+    if (open >= this.parts.streamsPerUser) throw new ProblemError('too-many-requests', `You have ${String(open)} live streams open, which is the most there may be. Close one of the other pages.`);
+    const reader: Reader = { run, me, stream: new EventStream(res), waiting: [], sentSeq: lastEventId ?? 0, samples: [] };
+    this.readers.add(reader);
+    reader.stream.onClosed(() => this.drop(reader));
+    reader.stream.retry(retryMs);
+    this.keepBeating();
+    try {
+      await this.fill(reader, lastEventId);
+    } catch (error) {
+      // Headers are out: ending the stream makes the browser come back and ask again.
+      this.end(reader);
+      throw error;
+    }
+  }
+
+  /** Sends what was just saved to everybody who follows the run. */
+  changed(runId: string, change: LiveChange): void {
+    for (const reader of this.readers) {
+      if (reader.run.runId !== runId) continue;
+      if (reader.waiting === null) sendChange(reader, change);
+      else reader.waiting.push(change);
+    }
+  }
+
+  /** Keeps new samples of a rig for the next beat. */
+  sampled(rigId: string, samples: LiveSamples): void {
+    for (const reader of this.readers) if (reader.run.rigId === rigId) reader.samples.push(samples);
+  }
+
+  /** Ends the streams of a session or of an account. */
+  endAccess(ended: { sessionId: string } | { userId: string }): void {
+    for (const reader of [...this.readers]) {
+      const meant = 'sessionId' in ended ? reader.me.session.id === ended.sessionId : reader.me.userId === ended.userId;
+      if (meant) this.end(reader);
+    }
+  }
+
+  close(): void {
+    for (const reader of [...this.readers]) this.end(reader);
+    this.cancelBeat?.();
+    this.cancelBeat = null;
+  }
+
+  private async fill(reader: Reader, lastEventId: number | null): Promise<void> {
+    const { source } = this.parts;
+    const view = await source.view(reader.run);
+    if (view === null) {
+      this.end(reader);
+      return;
+    }
+    if (lastEventId !== null && lastEventId <= view.lastSeq) await this.fillGap(reader, lastEventId);
+    reader.stream.send('snapshot', view, view.lastSeq);
+    reader.sentSeq = Math.max(lastEventId !== null && lastEventId > view.lastSeq ? 0 : reader.sentSeq, view.lastSeq);
+    const waiting = reader.waiting ?? [];
+    reader.waiting = null;
+    for (const change of waiting) sendChange(reader, change);
+  }
+
+  /** Events, then the rows of the step log they speak of: the page may have seen these rows unfinished. */
+  private async fillGap(reader: Reader, afterSeq: number): Promise<void> {
+    const { source } = this.parts;
+    const events = await source.events(reader.run, { afterSeq, limit: longestGap + 1 });
+    if (events.length > longestGap) return;
+    for (const event of events) reader.stream.send('event', event, event.seq);
+    reader.sentSeq = events.at(-1)?.seq ?? afterSeq;
+    const touched = new Set(events.map((event) => event.data.seq));
+    if (events.length === 0) return;
+    for (const step of await source.steps(reader.run)) if (touched.has(step.seq)) reader.stream.send('step', step, null);
+  }
+
+  private keepBeating(): void {
+    if (this.cancelBeat !== null || this.readers.size === 0) return;
+    this.cancelBeat = this.parts.clock.after(beatMs, () => {
+      this.cancelBeat = null;
+      this.beat();
+      this.keepBeating();
+    });
+  }
+
+  private beat(): void {
+    const { source, clock } = this.parts;
+    this.beats += 1;
+    for (const reader of this.readers) {
+      for (const samples of joined(reader.samples)) reader.stream.send('samples', samples, null);
+      reader.samples = [];
+      reader.stream.send('beat', { serverAt: new Date(clock.utcMs()).toISOString(), ...source.beat(reader.run) }, null);
+      if (this.beats % commentEveryBeats === 0) reader.stream.comment('still here');
+      if (this.beats % checkEveryBeats === 0) void this.check(reader);
+    }
+  }
+
+  private async check(reader: Reader): Promise<void> {
+    try {
+      if (!(await this.parts.source.mayStillRead(reader.me, reader.run.labId))) this.end(reader);
+    } catch {
+      // The database is away: who was let in stays in until it can be asked again.
+    }
+  }
+
+  private end(reader: Reader): void {
+    this.drop(reader);
+    reader.stream.end();
+  }
+
+  private drop(reader: Reader): void {
+    this.readers.delete(reader);
+  }
+}
+
+function sendChange(reader: Reader, change: LiveChange): void {
+  for (const event of change.events) {
+    if (event.seq <= reader.sentSeq) continue;
+    reader.stream.send('event', event, event.seq);
+    reader.sentSeq = event.seq;
+  }
+  for (const step of change.steps) reader.stream.send('step', step, null);
+  if (change.view.lastSeq >= reader.sentSeq) reader.stream.send('snapshot', change.view, change.view.lastSeq);
+}
+
+/** Batches of one channel as one message. */
+function joined(batches: readonly LiveSamples[]): LiveSamples[] {
+  const byChannel = new Map<string, LiveSamples>();
+  for (const batch of batches) {
+    const before = byChannel.get(batch.channelId);
+    byChannel.set(batch.channelId, before === undefined ? batch : { ...before, utcMs: [...before.utcMs, ...batch.utcMs], value: [...before.value, ...batch.value] });
+  }
+  return [...byChannel.values()];
+}

@@ -1,0 +1,52 @@
+import type { ArmView, RigLive, RigSummary, RigView } from '@/shared/contracts/rigs';
+import type { StandingArm } from '../interfaces/arm-keeper';
+import type { RigStation } from '../interfaces/rig-stations';
+import { listMassSets, type RigRecord } from '../store/rigs';
+import { activeRuns, type RunListRow } from '../store/runs-read';
+import { isoOf, isoOrNull } from './maker';
+import type { Services } from './services';
+
+/** The live state of a rig's line and turntable; what the line has not told is null. */
+export function rigLiveOf(station: RigStation | null): RigLive {
+  if (station === null)
+    return {
+      condition: 'closed', detail: 'this server does not drive the rig', lastReplyAt: null, roundTripMs: null, discardedLines: 0, positionKnown: false, angleDeg: null, moving: false, interlockClosed: null,
+      supplyPresent: null, driversOn: null,
+    };
+  const health = station.link.health();
+  const controller = station.link.controller();
+  return {
+    condition: health.condition,
+    detail: health.detail,
+    lastReplyAt: isoOrNull(health.lastReplyUtcMs),
+    roundTripMs: health.roundTripMs,
+    discardedLines: health.discardedLines,
+    positionKnown: controller?.positionKnown ?? false,
+    angleDeg: controller?.angleDeg ?? null,
+    moving: controller?.moving ?? false,
+    interlockClosed: controller?.interlockClosed ?? null,
+    supplyPresent: controller?.supplyPresent ?? null,
+    driversOn: controller?.driversOn ?? null,
+  };
+}
+
+export const armViewOf = (arm: StandingArm): ArmView => ({ id: arm.id, name: arm.name, from: isoOf(arm.fromUtcMs), until: isoOf(arm.untilUtcMs), note: arm.note });
+
+export function rigSummaryOf(services: Services, rig: RigRecord, run: RunListRow | undefined): RigSummary {
+  const arm = services.arms.armOf(rig.id);
+  return {
+    id: rig.id,
+    name: rig.name,
+    revision: rig.revision,
+    link: rig.link,
+    live: rigLiveOf(services.stations.get(rig.id)),
+    arm: arm === null ? null : armViewOf(arm),
+    activeRun: run === undefined ? null : { id: run.id, state: services.supervisor.activeOf(rig.id)?.facts().state ?? run.state, protocolName: run.protocolName },
+  };
+}
+
+export async function rigViewOf(services: Services, rig: RigRecord): Promise<RigView> {
+  const { db } = services.database;
+  const runs = await activeRuns(db, rig.labId);
+  return { ...rigSummaryOf(services, rig, runs.get(rig.id)), document: rig.document, massSets: await listMassSets(db, rig.labId, rig.id) };
+}

@@ -1,0 +1,157 @@
+import * as contracts from '@/shared/contracts/rigs';
+import { armRig, longestArmMs } from '@/server/store/arms';
+import * as store from '@/server/store/rigs';
+import { activeRuns } from '@/server/store/runs-read';
+import { audited } from '../audited';
+import { isoOf, makerOf } from '../maker';
+import { notFound, ProblemError } from '../problem-error';
+import { armViewOf, rigSummaryOf, rigViewOf } from '../rig-view';
+import { mount, type Membership, type SignedIn } from '../route-context';
+import type { Services } from '../services';
+import { busyWords, makeStartChecks } from '../start-checks';
+import { findRevision } from '@/server/store/protocols';
+
+type Caller = { me: SignedIn; membership: Membership; services: Services };
+
+async function load({ membership, services }: Pick<Caller, 'membership' | 'services'>, rigId: string): Promise<store.RigRecord> {
+  const rig = await store.findRig(services.database.db, membership.labId, rigId);
+  if (rig === null) throw notFound('rig');
+  return rig;
+}
+
+/** While a run has the rig, what it stands on must not change. */
+async function assertFree(services: Services, rig: store.RigRecord): Promise<void> {
+  const run = (await activeRuns(services.database.db, rig.labId)).get(rig.id);
+  if (run !== undefined) throw new ProblemError('rig-busy', busyWords(run));
+}
+
+const shortestArmMs = 60_000;
+
+function armEnd(until: string, nowUtcMs: number): number {
+  const untilUtcMs = Date.parse(until);
+  const item = (message: string) => [{ path: 'until', message }];
+  if (untilUtcMs < nowUtcMs + shortestArmMs) throw new ProblemError('invalid-input', `The arm would end at ${until}, which is past or less than a minute ahead. Choose a later end.`, item('an instant in the future'));
+  if (untilUtcMs > nowUtcMs + longestArmMs) throw new ProblemError('invalid-input', `The arm would end at ${until}, more than 72 h ahead. Nobody can answer for a rig for longer; choose an end before ${isoOf(nowUtcMs + longestArmMs)}.`, item('at most 72 h ahead'));
+  return untilUtcMs;
+}
+
+const rigRouteList = [
+  mount(contracts.listRigs, async ({ membership, services }) => {
+    const { db } = services.database;
+    const [rigs, runs] = [await store.listRigs(db, membership.labId), await activeRuns(db, membership.labId)];
+    return { items: rigs.map((rig) => rigSummaryOf(services, rig, runs.get(rig.id))) };
+  }),
+
+  mount(contracts.createRig, async (context) => {
+    const { body, membership, services } = context;
+    await services.stations.assertAllowed(body.link);
+    const entry = { kind: 'rig.added', data: (rigId: string) => ({ rigId, name: body.name }) };
+    const rigId = await audited(context, entry, (tx) => store.createRig(tx, { labId: membership.labId, ...body, massSetLabel: 'As in the rig document' }, makerOf(context)));
+    const rig = await load(context, rigId);
+    await services.stations.put(rig);
+    return rigViewOf(services, rig);
+  }),
+
+  mount(contracts.getRig, async (context) => {
+    const rig = await load(context, context.params.rigId);
+    context.setEtag(String(rig.revision));
+    return rigViewOf(context.services, rig);
+  }),
+
+  mount(contracts.reviseRig, async (context) => {
+    const { body, membership, params, services, ifMatch } = context;
+    const before = await load(context, params.rigId);
+    if (String(before.revision) !== ifMatch) throw await revisedMeanwhile(context, before);
+    await assertFree(services, before);
+    const entry = { kind: 'rig.revised', data: (done: boolean) => ({ rigId: before.id, from: before.revision, to: done ? before.revision + 1 : null, reason: body.reason }) };
+    const revision = { labId: membership.labId, rigId: before.id, expectedRevision: before.revision, ...body };
+    const done = await audited(context, entry, async (tx) => {
+      if (!(await store.reviseRig(tx, revision, makerOf(context)))) throw await revisedMeanwhile(context, await load(context, before.id));
+      return true;
+    });
+    const rig = await load(context, before.id);
+    if (done) await services.stations.put(rig);
+    context.setEtag(String(rig.revision));
+    return rigViewOf(services, rig);
+  }),
+
+  mount(contracts.listRigRevisions, async (context) => {
+    const rig = await load(context, context.params.rigId);
+    const revisions = await store.listRigRevisions(context.services.database.db, rig.labId, rig.id);
+    return { items: revisions.map(({ number, madeAt, madeBy, reason, document }) => ({ number, at: isoOf(madeAt), by: madeBy, reason, document })) };
+  }),
+];
+
+async function revisedMeanwhile({ services, membership }: Pick<Caller, 'services' | 'membership'>, rig: store.RigRecord): Promise<ProblemError> {
+  const [newest] = await store.listRigRevisions(services.database.db, membership.labId, rig.id);
+  const who = newest === undefined ? 'Somebody' : newest.madeBy;
+  return new ProblemError('edited-meanwhile', `${who} made revision ${String(rig.revision)} of ${rig.name} after you opened it${newest === undefined ? '' : ` ("${newest.reason}", ${isoOf(newest.madeAt)})`}. Open that revision and make your change there.`);
+}
+
+const linkRoutes = [
+  mount(contracts.changeLink, async (context) => {
+    const { body, params, services } = context;
+    const before = await load(context, params.rigId);
+    await assertFree(services, before);
+    await services.stations.assertAllowed(body);
+    const entry = { kind: 'rig.link-changed', data: () => ({ rigId: before.id, from: before.link, to: body }) };
+    await audited(context, entry, (tx) => store.changeRigLink(tx, { labId: before.labId, rigId: before.id, settings: body }, makerOf(context)));
+    const rig = await load(context, before.id);
+    await services.stations.put(rig);
+    return rigViewOf(services, rig);
+  }),
+
+  mount(contracts.tryLink, async (context) => {
+    const rig = await load(context, context.params.rigId);
+    await assertFree(context.services, rig);
+    await context.services.stations.assertAllowed(context.body);
+    return context.services.stations.tryLine(rig, context.body);
+  }),
+];
+
+const armRoutes = [
+  mount(contracts.arm, async (context) => {
+    const { body, params, me, services } = context;
+    const rig = await load(context, params.rigId);
+    const nowUtcMs = services.clock.utcMs();
+    const untilUtcMs = armEnd(body.until, nowUtcMs);
+    const controller = services.stations.get(rig.id)?.link.controller() ?? null;
+    if (controller === null) throw new ProblemError('not-ready', `The controller of ${rig.name} does not answer, so nobody can say whether it is safe. See to the link first.`);
+    if (!controller.interlockClosed) throw new ProblemError('not-ready', `The interlock of ${rig.name} is open. Leave the room, close the door, then arm.`);
+    if (!controller.supplyPresent) throw new ProblemError('not-ready', `The motor supply of ${rig.name} is off. Switch it on at the rig, then arm.`);
+    const entry = { kind: 'rig.armed', data: () => ({ rigId: rig.id, name: body.name, until: body.until }) };
+    const stored = await audited(context, entry, (tx) => armRig(tx, { labId: rig.labId, rigId: rig.id, name: body.name, note: body.note, armedById: me.userId, nowUtcMs, untilUtcMs }));
+    const arm = { id: stored.id, name: stored.name, note: stored.note, fromUtcMs: stored.fromAt, untilUtcMs: stored.untilAt };
+    services.arms.set(rig.id, arm);
+    return armViewOf(arm);
+  }),
+
+  mount(contracts.disarm, async (context) => {
+    const rig = await load(context, context.params.rigId);
+    if (context.services.arms.armOf(rig.id) === null) throw new ProblemError('not-found', `${rig.name} is not armed.`);
+    context.services.arms.end({ labId: rig.labId, rigId: rig.id }, 'disarmed', { id: context.me.userId, name: context.me.name });
+    return undefined;
+  }),
+
+  mount(contracts.addMassSet, async (context) => {
+    const { body, params, services } = context;
+    const rig = await load(context, params.rigId);
+    const entry = { kind: 'rig.mass-set-added', data: () => ({ rigId: rig.id, label: body.label }) };
+    return audited(context, entry, async (tx) => {
+      const massSet = await store.addMassSet(tx, { labId: rig.labId, rigId: rig.id, ...body, createdAt: services.clock.utcMs() });
+      if (massSet === null) throw new ProblemError('already-exists', `${rig.name} has a mass set called "${body.label}" already. Choose another label.`, [{ path: 'label', message: 'a label of its own' }]);
+      return massSet;
+    });
+  }),
+
+  mount(contracts.startChecks, async (context) => {
+    const { query, params, membership, services } = context;
+    const rig = await load(context, params.rigId);
+    const revision = await findRevision(services.database.db, { labId: membership.labId, protocolId: query.protocolId }, query.revision);
+    if (revision === null) throw notFound('protocol revision');
+    const report = await makeStartChecks(services, { rig, document: rig.document, protocol: revision.document, timeZone: membership.timeZone });
+    return { checks: report.checks, mayStart: report.mayStart, durationS: report.durationS, finishAt: isoOf(report.finishUtcMs), firstMove: report.firstMove };
+  }),
+];
+
+export const rigRoutes = [...rigRouteList, ...linkRoutes, ...armRoutes];

@@ -1,0 +1,73 @@
+import type { RunStart } from '@/shared/archive/run-records';
+import type { RunSummary, RunView } from '@/shared/contracts/runs';
+import { CHART_VERSION, type RunSnapshot } from '../engine/run-context';
+import { factsOf, plannedDwells, type RunFacts } from '../engine/run-facts';
+import { readSteps, type RunListRow, type RunRecord } from '../store/runs-read';
+import { isoOf, isoOrNull } from './maker';
+import type { Services } from './services';
+
+/** What a list shows of a run. */
+export function runSummaryOf(row: RunListRow): RunSummary {
+  return {
+    id: row.id, rigId: row.rigId, rigName: row.rigName, protocolId: row.protocolId, protocolName: row.protocolName, protocolRevision: row.protocolRevision, state: row.state, rehearsal: row.rehearsal,
+    operator: row.operator, createdAt: isoOf(row.createdAt), startedAt: isoOrNull(row.startedAt), endedAt: isoOrNull(row.endedAt), predictedEndAt: isoOrNull(row.predictedEndAt),
+  };
+}
+
+/** A run as the database holds it, whoever drives it. */
+export async function storedRunView(services: Services, run: RunRecord): Promise<RunView> {
+  return runViewOf(run, await factsOfStored(services, run));
+}
+
+/** Columns and facts of the engine as one view. */
+export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts): RunView {
+  const { start } = run;
+  return {
+    ...runSummaryOf(run),
+    state: facts.state,
+    startedAt: isoOrNull(facts.startedAtUtcMs),
+    endedAt: isoOrNull(facts.endedAtUtcMs),
+    predictedEndAt: isoOrNull(facts.predictedEndUtcMs),
+    notes: start.notes,
+    massSetLabel: start.massSetLabel,
+    reason: facts.reason,
+    current: facts.current,
+    deadlineAt: isoOrNull(facts.deadlineUtcMs),
+    dwellsDone: facts.dwellsDone,
+    dwellsPlanned: facts.dwellsPlanned,
+    holdAfterDwell: facts.holdAfterDwell,
+    intervention:
+      facts.intervention === null
+        ? null
+        : { kind: facts.intervention.kind, by: facts.intervention.by, serverAt: isoOf(facts.intervention.serverAtUtcMs), confirmedAt: isoOrNull(facts.intervention.confirmedAtUtcMs) },
+    mayResume: facts.mayResume,
+    lastSeq: facts.lastSeq,
+    rig: start.rig,
+    protocol: start.protocol,
+    simulated: start.simulated === null ? null : { trueG: start.simulated.trueG, seed: start.simulated.seed, rateHz: start.simulated.rateHz },
+  };
+}
+
+async function factsOfStored(services: Services, run: RunRecord): Promise<RunFacts> {
+  const dwellsPlanned = plannedDwells(run.start, run.startedAt ?? run.createdAt);
+  const snapshot = run.chartVersion === CHART_VERSION ? (run.snapshot as RunSnapshot | null) : null;
+  if (snapshot !== null)
+    return factsOf({ start: run.start, snapshot, nowUtcMs: services.clock.utcMs(), arm: null, lastSeq: run.lastSeq, predictedEndUtcMs: run.predictedEndAt, dwellsPlanned });
+  const steps = await readSteps(services.database.db, run.labId, run.id);
+  return {
+    runId: run.id,
+    state: run.state,
+    reason: run.failure ?? services.supervisor.quarantinedOf(run.rigId)?.why ?? '',
+    startedAtUtcMs: run.startedAt,
+    endedAtUtcMs: run.endedAt,
+    predictedEndUtcMs: run.predictedEndAt,
+    current: steps.find((step) => step.outcome === null) ?? null,
+    deadlineUtcMs: null,
+    dwellsDone: steps.filter((step) => step.kind === 'dwell' && step.outcome === 'done').length,
+    dwellsPlanned,
+    holdAfterDwell: false,
+    intervention: null,
+    mayResume: { ok: false, why: 'The run is not driven by this server.' },
+    lastSeq: run.lastSeq,
+  };
+}

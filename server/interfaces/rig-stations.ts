@@ -1,0 +1,41 @@
+import type { LinkSettings } from '@/shared/contracts/rigs';
+import type { RigDocument } from '@/shared/rig/document';
+import type { TurntableLink } from './turntable-link';
+
+/** What a rig is to this process: its open line, and for the simulated rig the pendulum behind it. */
+export interface RigStation {
+  labId: string;
+  rigId: string;
+  settings: LinkSettings;
+  link: TurntableLink;
+  /** Channel that the rig itself fills; null where data come from outside. */
+  channel: { id: string; name: string; unit: string } | null;
+}
+
+export interface StationRig {
+  labId: string;
+  id: string;
+  document: RigDocument;
+  link: LinkSettings;
+}
+
+export interface LiveSampleBatch {
+  rigId: string;
+  channelId: string;
+  channel: string;
+  unit: string;
+  utcMs: Float64Array;
+  value: Float64Array;
+}
+
+/** The rigs that this process drives. */
+export interface RigStations {
+  get(rigId: string): RigStation | null;
+  /** Opens a rig's line, or opens it anew after its settings or its document changed; no run may be on it. */
+  put(rig: StationRig): Promise<void>;
+  /** @throws NotYetError for a line that this version may not open */
+  assertAllowed(settings: LinkSettings): Promise<void>;
+  /** Opens a line apart from the rig's own, says hello and tells what answered; nothing moves. Never rejects. */
+  tryLine(rig: Pick<StationRig, 'document'>, settings: LinkSettings): Promise<{ ok: boolean; detail: string; firmware: string | null }>;
+  onSamples(listener: (batch: LiveSampleBatch) => void): () => void;
+}
