@@ -49,10 +49,29 @@ export function homeSpeedDegS(motion: RigMotion): number {
   return motion.homeSpeed_deg_s ?? motion.maxSpeed_deg_s / 10;
 }
 
-/** How long homing from the angle `fromDeg` (deg) takes by plan, s: the way to the edge of the flag at home speed. */
+/** Before it settles on the edge the controller goes this many microsteps below it, so that the zero is always met from the same side. */
+const homeClearanceSteps = 8;
+
+/**
+ * How long homing from the angle `fromDeg` (deg) takes by plan, s: to the edge of the flag at home speed, braking past it, to a place
+ * below it and from there onto it, as the turntable link's specification says under Motion.
+ */
 export function homeDurationS(rig: RigDocument, fromDeg: number): number {
   const motion = motionOf(rig);
-  return trapezoid({ fromDeg, toDeg: motion.homeDeg, speedDegS: homeSpeedDegS(motion), accelerationDegS2: motion.maxAcceleration_deg_s2 }).durationS;
+  const speed = homeSpeedDegS(motion);
+  const acceleration = motion.maxAcceleration_deg_s2;
+  const stepDeg = 1 / motion.stepsPerDegree;
+  const aboveDeg = fromDeg - motion.homeDeg;
+  const covered = aboveDeg < 0;
+  const toEdgeDeg = covered ? -aboveDeg : aboveDeg + stepDeg;
+  const speedAtEdge = Math.min(speed, Math.sqrt(2 * acceleration * toEdgeDeg));
+  const rampDeg = (speed * speed) / (2 * acceleration);
+  const searchS = toEdgeDeg <= rampDeg ? speedAtEdge / acceleration : toEdgeDeg / speed + speed / (2 * acceleration);
+  const overshootDeg = (speedAtEdge * speedAtEdge) / (2 * acceleration);
+  const stoppedDeg = covered ? overshootDeg : -(stepDeg + overshootDeg);
+  const belowDeg = -(Math.abs(stoppedDeg) + homeClearanceSteps * stepDeg);
+  const legS = (from: number, to: number) => trapezoid({ fromDeg: from, toDeg: to, speedDegS: speed, accelerationDegS2: acceleration }).durationS;
+  return searchS + speedAtEdge / acceleration + legS(stoppedDeg, belowDeg) + legS(belowDeg, 0);
 }
 
 /** The rig's damped period with the sources away, s. @throws UnplayableStep where it has not been measured. */
