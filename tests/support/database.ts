@@ -83,7 +83,7 @@ export async function freshDatabase(): Promise<TestDatabase> {
 }
 
 /** One database for the tests of a file (or of a `describe`): made before, dropped after. The result is called inside tests. */
-export function useDatabase(): () => TestDatabase {
+export function databaseOfThisFile(): () => TestDatabase {
   let database: TestDatabase | undefined;
   beforeAll(async () => {
     database = await freshDatabase();

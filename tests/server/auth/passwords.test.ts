@@ -13,8 +13,22 @@ test('composed and decomposed letters are the same password', async () => {
   expect(await verifyPassword(hash, 'Zürichsee im Nebel'.normalize('NFD'))).toBe(true);
 });
 
-test('without an account nothing matches, and the work is the same kind of work', async () => {
-  expect(await verifyPassword(null, 'lantern moss quartz')).toBe(false);
+test('without an account nothing matches, and finding that out takes as long as with one', async () => {
+  const hash = await hashPassword('lantern moss quartz');
+  const medianMs = async (passwordHash: string | null) => {
+    const times: number[] = [];
+    for (let n = 0; n < 15; n += 1) {
+      const startMs = performance.now();
+      expect(await verifyPassword(passwordHash, 'some other words')).toBe(false);
+      times.push(performance.now() - startMs);
+    }
+    return times.sort((a, b) => a - b)[7] as number;
+  };
+  await medianMs(hash);
+  const ratio = (await medianMs(null)) / (await medianMs(hash));
+  // Ample room for a busy machine; skipping the work would make it some thousandth.
+  expect(ratio).toBeGreaterThan(0.4);
+  expect(ratio).toBeLessThan(2.5);
 });
 
 test.each([

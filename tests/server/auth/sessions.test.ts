@@ -4,7 +4,7 @@ import type { SessionPort } from '@/server/interfaces/sessions';
 import { addMember, changeMember } from '@/server/store/people';
 import { sweepSessions } from '@/server/store/session-rows';
 import type { Role } from '@/shared/contracts/roles';
-import { useDatabase } from '@/tests/support/database';
+import { databaseOfThisFile } from '@/tests/support/database';
 import { eveningUtcMs, makeLab, makeMember, makeUser, sha256 } from '../store/rows';
 
 const hourMs = 3_600_000;
@@ -110,7 +110,7 @@ function describeSessionPort(name: string, make: (nowUtcMs: () => number) => Ses
   });
 }
 
-const database = useDatabase();
+const database = databaseOfThisFile();
 const db = () => database().connection.db;
 const newToken = () => randomBytes(32).toString('base64url');
 

@@ -1,9 +1,9 @@
 import { appendAudit, auditPage } from '@/server/store/audit';
 import { verifyChain } from '@/shared/archive/chain';
-import { useDatabase } from '@/tests/support/database';
+import { databaseOfThisFile } from '@/tests/support/database';
 import { eveningUtcMs, makeLab, sha256 } from './rows';
 
-const database = useDatabase();
+const database = databaseOfThisFile();
 const db = () => database().connection.db;
 const fact = (labId: string, n: number) => ({ labId, who: { id: null, name: 'server' }, kind: 'lab.changed', data: { n, gone: undefined, odd: '\u0000' }, utcMs: eveningUtcMs + n });
 

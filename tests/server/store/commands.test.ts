@@ -2,10 +2,10 @@ import { armRig, currentArm, endArm } from '@/server/store/arms';
 import { createIdempotency, sweepIdempotencyKeys } from '@/server/store/idempotency';
 import { countUse, forgetUses, sweepRateLimits } from '@/server/store/rate-limits';
 import { giveRigLease, takeRigLease } from '@/server/store/rig-leases';
-import { useDatabase } from '@/tests/support/database';
+import { databaseOfThisFile } from '@/tests/support/database';
 import { eveningUtcMs, makeLab, makeRig, makeUser } from './rows';
 
-const database = useDatabase();
+const database = databaseOfThisFile();
 const db = () => database().connection.db;
 const hourMs = 3_600_000;
 

@@ -1,10 +1,10 @@
 import { eq } from 'drizzle-orm';
 import { jobs } from '@/db/schema';
 import { createJobQueue, enqueueJob } from '@/server/store/jobs';
-import { useDatabase } from '@/tests/support/database';
+import { databaseOfThisFile } from '@/tests/support/database';
 import { eveningUtcMs } from './rows';
 
-const database = useDatabase();
+const database = databaseOfThisFile();
 let nowUtcMs = eveningUtcMs;
 const queue = (holder = 'worker') => createJobQueue(database().connection.db, holder, () => nowUtcMs);
 const ask = (payload: unknown, more: { dueAtUtcMs?: number; maxAttempts?: number } = {}) => enqueueJob(database().connection.db, { kind: 'mail', payload, labId: null, nowUtcMs, ...more });

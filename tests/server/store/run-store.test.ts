@@ -4,10 +4,10 @@ import { StaleRunError, type RunWrite } from '@/server/interfaces/run-store';
 import { createRunStore } from '@/server/store/run-store';
 import { appendEvent, emptyChain, verifyChain, type ChainHead } from '@/shared/archive/chain';
 import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
-import { useDatabase } from '@/tests/support/database';
+import { databaseOfThisFile } from '@/tests/support/database';
 import { eveningUtcMs, makeLab, makeRig, makeRun, runStart, sha256 } from './rows';
 
-const database = useDatabase();
+const database = databaseOfThisFile();
 const db = () => database().connection.db;
 
 async function freshRun(changes: Partial<RunStart> = {}) {

@@ -1,11 +1,11 @@
-import fc from 'fast-check';
+import * as fc from 'fast-check';
 import { createSampleStore, UnusableBatchError } from '@/server/store/sample-store';
 import { decodeSamples, encodeSamples } from '@/server/store/sample-copy';
 import type { SampleBatch } from '@/server/interfaces/sample-store';
-import { useDatabase } from '@/tests/support/database';
+import { databaseOfThisFile } from '@/tests/support/database';
 import { eveningUtcMs, makeChannel, makeLab, makeRig } from './rows';
 
-const database = useDatabase();
+const database = databaseOfThisFile();
 const allTime = { fromUtcMs: -Infinity, toUtcMs: Infinity };
 
 async function freshChannel() {

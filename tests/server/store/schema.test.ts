@@ -1,9 +1,9 @@
 import { sql } from 'drizzle-orm';
 import { instant, timestampOfUtcMs, utcMsOfTimestamp } from '@/db/schema/columns';
 import * as schema from '@/db/schema';
-import { useDatabase } from '@/tests/support/database';
+import { databaseOfThisFile } from '@/tests/support/database';
 
-const database = useDatabase();
+const database = databaseOfThisFile();
 const run = (text: string) => database().connection.pool.query(text);
 
 test('an instant keeps its microseconds through the database', async () => {
