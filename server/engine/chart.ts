@@ -4,7 +4,7 @@ import { explainStartRefusal, newContext, noteBeginning, startRefusal, startRun 
 import { Draft, nothingOut, type Output } from './draft';
 import {
   awaitReturn, becomeFailed, becomeFinished, becomeHeld, becomeStopped, beginHold, beginStop, carryOn, type GraveCause, noteGrave, noteInterruption,
-  noteRefusedResume, noteRestart, requestHold, requestHoldAfterDwell, requestStop, resume, resumeRefusal, returnRefusal,
+  noteRefusedResume, noteRestart, requestHold, requestHoldAfterDwell, requestStop, resume, resumeRefusal, returnRefusal, takeAheadUnseen,
 } from './halting';
 import { hasRestarted, noteArmKey, noteEdge, noteInterlock, noteLease, noteLost, noteReady, noteRefusal, noteReset, noteStandstill, noteStrangeMotion, noteSupply } from './observations';
 import { type Advance, CHART_VERSION, type ChartState, type RunContext, type RunEvent, type RunSnapshot } from './run-context';
@@ -164,6 +164,7 @@ const machine = chart.createMachine({
         begin: [
           { guard: when((draft) => startRefusal(draft) !== null, noteBeginning), target: 'failed', actions: act(noteBeginning, explainStartRefusal) },
           { guard: ({ event }) => event.controller !== null, target: 'choosing', actions: act(noteBeginning, startRun) },
+          { actions: act(noteBeginning) },
         ],
         'link.ready': [
           { guard: when((draft) => startRefusal(draft) !== null, noteReady), target: 'failed', actions: act(noteReady, explainStartRefusal) },
@@ -227,7 +228,7 @@ const machine = chart.createMachine({
         ...pick(comingToRest, 'link.motion-began', 'link.motion-ended', 'link.homed'),
         'link.ready': [...guarded(bootedAnew, gravely(noteReset, noteReady)), { actions: act(noteReady, awaitReturn) }],
         'link.standstill': [
-          { guard: when((draft) => returnRefusal(draft) === null, noteStandstill), target: 'choosing', actions: act(noteStandstill, carryOn) },
+          { guard: when((draft) => returnRefusal(draft) === null, noteStandstill, takeAheadUnseen), target: 'choosing', actions: act(noteStandstill, takeAheadUnseen, carryOn) },
           { target: 'holding', actions: act(noteStandstill, explainNoReturn, beginHold) },
         ],
         deadline: { target: 'holding', actions: act(explainNoReturn, beginHold) },

@@ -3,7 +3,7 @@ import { startRun } from './beginning';
 import type { Draft } from './draft';
 import type { InterruptionCause, KnownController, RunEvent } from './run-context';
 import { predictEndUtcMs } from './predicted-end';
-import { beginHome, beginStanding, beginSwing, chooseNext, finishMotion, reachedTarget, standingEndUtcMs, toleranceDeg } from './steps';
+import { beginHome, beginStanding, beginSwing, chooseNext, finishMotion, reachedTarget, standingEndUtcMs, takeAhead, toleranceDeg } from './steps';
 import { CONFIRM_MS, GAP_LIMIT_MS, LEAD_MS } from './timing';
 
 /** How a run comes to rest and how it goes on: holds, stops, interruptions, resuming. */
@@ -114,7 +114,7 @@ export function awaitReturn(draft: Draft): void {
 export function returnRefusal(draft: Draft): string | null {
   const { context } = draft;
   const gapMs = draft.nowUtcMs - (context.interruption?.sinceUtcMs ?? draft.nowUtcMs);
-  if (gapMs > GAP_LIMIT_MS) return 'It lasted more than 10 min.';
+  if (gapMs >= GAP_LIMIT_MS) return 'It lasted more than 10 min.';
   return motionRefusal(draft, draft.start.simulated === null ? context.arm : 'simulated', context.armVoid);
 }
 
@@ -204,9 +204,20 @@ function resumeStep(draft: Draft): void {
   beginSwing(draft, { item: step.item, late: true });
 }
 
+/**
+ * A move that waited in the controller may have begun while nobody listened: then the sources no longer stand where the
+ * standing step left them, and the beginning is the start time it was sent with.
+ */
+export function takeAheadUnseen(draft: Draft): void {
+  const { ahead, step, moment, controller } = draft.context;
+  if (ahead === null || step?.motion !== null || controller?.angleDeg == null || draft.nowUtcMs < ahead.startUtcMs) return;
+  if (Math.abs(controller.angleDeg - moment.angleDeg) > toleranceDeg(draft)) takeAhead(draft);
+}
+
 /** The turntable stands still: the open row is closed with what is known of its end. */
 export function closeForRest(draft: Draft): void {
   const { context } = draft;
+  takeAheadUnseen(draft);
   const { step } = context;
   if (step === null || step.row.outcome !== null) return;
   const angleDeg = draft.controller.positionKnown ? draft.controller.angleDeg : null;

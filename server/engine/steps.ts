@@ -290,7 +290,7 @@ function peekSwing(draft: Draft, utcMs: number): SwingStep | null {
   }
 }
 
-/** The controller began the move that was sent ahead: the standing step is over and the swing is the present step. */
+/** The controller began the move that was sent ahead (or must have, unseen): the standing step is over and the swing is the present step. */
 export function takeAhead(draft: Draft): void {
   const { context } = draft;
   const { ahead } = context;
@@ -313,15 +313,17 @@ export function takeAhead(draft: Draft): void {
 
 /** The controller's stamp of the beginning goes into the row; from it a beat is counted. */
 export function noteBegan(draft: Draft): void {
-  const { context, stamp, event } = draft;
+  const { context, event } = draft;
   const { step } = context;
-  if (step?.motion == null || event.type !== 'link.motion-began') return;
+  if (step?.motion == null) return;
+  const seen = event.type === 'link.motion-began';
+  const stamp = seen ? draft.stamp : { utcMs: step.motion.startUtcMs ?? step.row.startUtcMs, uS: context.uPlanS };
   step.motion.began = true;
   context.moveRetries = 0;
   context.uPlanS = stamp.uS;
   if (context.onCadence && stamp.utcMs - step.row.plannedStartUtcMs > LATE_MS) step.motion.late = true;
   Object.assign(step.row, { startUtcMs: stamp.utcMs, uStartS: stamp.uS });
-  if (event.link.angleDeg !== null) step.row.angleStartDeg = event.link.angleDeg;
+  if (seen && event.link.angleDeg !== null) step.row.angleStartDeg = event.link.angleDeg;
   if (step.row.kind === 'swing') context.swingStartUtcMs = stamp.utcMs;
   draft.saveRow(step.row);
   confirmResume(draft);

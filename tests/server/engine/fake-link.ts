@@ -93,6 +93,11 @@ export class FakeLink implements TurntableLink {
     for (const id of this.unconfirmed.splice(0)) this.confirm(id);
   }
 
+  /** Nobody has renewed the motion lease for 2 s. */
+  lapseLease(): void {
+    this.endMotion('lease');
+  }
+
   openInterlock(): void {
     this.interlockClosed = false;
     this.say({ kind: 'interlock', at: this.at(), closed: false });
