@@ -2,6 +2,7 @@ import type { Logger } from 'pino';
 import type { RigSupervisor } from '../engine/rig-supervisor';
 import type { ArmKeeper } from '../interfaces/arm-keeper';
 import type { Clock } from '../interfaces/clock';
+import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { IdempotencyPort } from '../interfaces/idempotency';
 import type { MailPort } from '../interfaces/mail';
 import type { RigStations } from '../interfaces/rig-stations';
@@ -10,6 +11,7 @@ import type { ServerConfig } from '../interfaces/server-config';
 import type { SessionPort } from '../interfaces/sessions';
 import type { Connection } from '../store/database';
 import type { AccessDirectory } from './access-directory';
+import type { ActiveRuns } from './active-runs';
 import type { LiveHub } from './live/live-hub';
 
 /** Everything a route may use; built once by `server/boot/build-server.ts`. */
@@ -32,7 +34,11 @@ export interface Services {
   stations: RigStations;
   arms: ArmKeeper;
   supervisor: RigSupervisor;
+  activeRuns: ActiveRuns;
   live: LiveHub;
+  tasks: HeavyTasks;
+  /** Lets something go on after the answer; a failure is logged, and `idle` waits for it. */
+  background(work: Promise<unknown>, what: string): void;
   /** Lets everything else have a turn: long work calls it between its parts, so that hold and stop never wait for it. */
   breathe(): Promise<void>;
   /** Tells the workers that a job was queued, so that it need not wait for their next look. */

@@ -4,7 +4,9 @@ import { isKey, timestampOfUtcMs } from '@/db/schema/columns';
 import type { ChainedEvent, StepRow } from '@/shared/archive/run-records';
 import type { RunState } from '@/shared/contracts/runs';
 import type { ChannelRecord } from './imports';
-import type { Connection, Handle } from './database';
+import type { RehearsalRecords } from '../interfaces/heavy-tasks';
+import type { Connection, Database, Handle } from './database';
+import { createRunStore } from './run-store';
 
 const summaryColumns = {
   labId: runs.labId, id: runs.id, rigId: runs.rigId, rigRevision: runs.rigRevision, protocolId: runs.protocolId, massSetId: runs.massSetId, rehearsal: runs.rehearsal, rigName: runs.rigName,
@@ -121,8 +123,21 @@ export async function lastSampleUtcMs(connection: Connection, channel: { labId: 
   return result.rows[0]?.ms ?? null;
 }
 
-/** Labs with a run that has not ended. */
-export async function labsWithActiveRuns(db: Handle): Promise<string[]> {
-  const rows = await db.selectDistinct({ labId: runs.labId }).from(runs).where(and(eq(runs.rehearsal, false), notInArray(runs.state, endedStates)));
-  return rows.map((row) => row.labId);
+/** Runs on rigs, of all labs, that have not ended. */
+export const unfinishedRuns = (db: Handle): Promise<RunRecord[]> => db.select().from(runs).where(and(eq(runs.rehearsal, false), notInArray(runs.state, endedStates)));
+
+/** Ends a run that nothing can carry on, saying why. */
+export async function markRunFailed(db: Handle, run: { labId: string; id: string }, end: { why: string; nowUtcMs: number }): Promise<void> {
+  await db
+    .update(runs)
+    .set({ state: 'failed', outcome: 'failed', failure: end.why, endedAt: end.nowUtcMs })
+    .where(and(eq(runs.labId, run.labId), eq(runs.id, run.id), notInArray(runs.state, endedStates)));
+}
+
+/** Stores what a rehearsal left, all or nothing. */
+export async function storeRehearsal(db: Database, run: { labId: string; id: string }, records: RehearsalRecords): Promise<void> {
+  const { outcome } = records;
+  const summary = { state: outcome, outcome, startedAtUtcMs: records.startedAtUtcMs, endedAtUtcMs: records.endedAtUtcMs, predictedEndUtcMs: null };
+  await createRunStore(db).commit({ labId: run.labId, runId: run.id, expectedSeq: 0, snapshot: null, chartVersion: 0, steps: records.steps, events: records.events, summary });
+  if (records.reason !== '') await db.update(runs).set({ failure: records.reason }).where(and(eq(runs.labId, run.labId), eq(runs.id, run.id)));
 }

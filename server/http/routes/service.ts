@@ -3,13 +3,10 @@ import * as contracts from '@/shared/contracts/service';
 import { routes } from '@/shared/contracts';
 import { protocolDocumentSchema } from '@/shared/protocol/document';
 import { ping } from '@/server/store/health';
-import packageFacts from '@/package.json';
 import { isoOf } from '../maker';
 import { openApiOf } from '../openapi';
 import { mount } from '../route-context';
-
-/** Name and version of this program, as archives and the API name it. */
-export const softwareVersion: string = packageFacts.version;
+import { softwareVersion } from '../software';
 
 const openApi = JSON.stringify(openApiOf(routes, softwareVersion));
 

@@ -1,0 +1,53 @@
+import type { RunStart } from '@/shared/archive/run-records';
+import type { RunView } from '@/shared/contracts/runs';
+import type { RunChange, RunDriver } from '../engine/run-driver';
+import type { RigSupervisor } from '../engine/rig-supervisor';
+import type { RunListRow } from '../store/runs-read';
+import type { LiveHub } from './live/live-hub';
+import { runViewOf } from './run-view';
+
+export type ActiveRun = RunListRow & { start: RunStart };
+
+/**
+ * The runs that this process drives, with all that a screen needs of them in memory: hold, stop and the live stream go on
+ * while the database is away.
+ */
+export class ActiveRuns {
+  private readonly byId = new Map<string, ActiveRun>();
+
+  constructor(private readonly parts: { supervisor: RigSupervisor; live: LiveHub }) {
+    parts.supervisor.onChange((driver, change) => this.changed(driver, change));
+  }
+
+  /** Before the driver of the run begins. */
+  add(run: ActiveRun): void {
+    this.byId.set(run.id, run);
+  }
+
+  remove(runId: string): void {
+    this.byId.delete(runId);
+  }
+
+  find(labId: string, runId: string): { run: ActiveRun; driver: RunDriver } | null {
+    const run = this.byId.get(runId);
+    const driver = this.parts.supervisor.driverOf(runId);
+    return run === undefined || run.labId !== labId || driver === null ? null : { run, driver };
+  }
+
+  view(labId: string, runId: string): RunView | null {
+    const found = this.find(labId, runId);
+    return found === null ? null : runViewOf(found.run, found.driver.facts());
+  }
+
+  /** Labs with a run that this process drives. */
+  labIds(): string[] {
+    return [...new Set([...this.byId.values()].map((run) => run.labId))];
+  }
+
+  private changed(driver: RunDriver, change: RunChange): void {
+    const run = this.byId.get(driver.runId);
+    if (run === undefined) return;
+    this.parts.live.changed(run.id, { events: change.events, steps: change.steps, view: runViewOf(run, change.facts) });
+    if (driver.isOver()) this.byId.delete(run.id);
+  }
+}

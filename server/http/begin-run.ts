@@ -1,0 +1,135 @@
+import type { RunStart } from '@/shared/archive/run-records';
+import { CODATA_2022_G } from '@/shared/physics/constants';
+import type { ProtocolDocument } from '@/shared/protocol/document';
+import { checkProtocol } from '@/shared/protocol/check';
+import { StartRefused } from '../engine/rig-supervisor';
+import { enqueueJob } from '../store/jobs';
+import type { MassSetRecord, RigRecord } from '../store/rigs';
+import { insertRun } from '../store/run-store';
+import { activeRuns, findRun, markRunFailed, type RunRecord } from '../store/runs-read';
+import { audited } from './audited';
+import { ProblemError } from './problem-error';
+import { refusalOf } from './refused-protocol';
+import type { Membership, SignedIn } from './route-context';
+import { rehearsalJobKind, type RehearsalJob } from './work/rehearsal-job';
+import type { Services } from './services';
+import { busyWords, makeStartChecks, type StartReport } from './start-checks';
+
+export interface Caller {
+  me: SignedIn;
+  membership: Membership;
+  services: Services;
+}
+
+export interface Begin {
+  rig: RigRecord;
+  protocolId: string;
+  protocol: ProtocolDocument;
+  /** 0 for the draft of a rehearsal. */
+  revision: number;
+  notes: string;
+}
+
+const longestTapMs = 5_000;
+
+/** A command that sets masses in motion acts on a fresh tap only: a delayed one may come when somebody has walked in. */
+export function assertFreshTap(tappedAt: string | undefined, nowUtcMs: number, act: string): void {
+  if (tappedAt === undefined) return;
+  const ageMs = nowUtcMs - Date.parse(tappedAt);
+  if (Math.abs(ageMs) <= longestTapMs) return;
+  const words = ageMs > 0 ? `was made ${String(Math.round(ageMs / 1000))} s ago` : 'lies in the future by the server\'s clock';
+  throw new ProblemError('not-possible-now', `The tap to ${act} ${words}; it counts for 5 s. Nothing was moved. Look at the rig again, then ${act} once more.`);
+}
+
+function runStartOf({ me, membership, services }: Caller, begin: Begin): Omit<RunStart, 'rig' | 'massSetLabel' | 'arm' | 'simulated'> {
+  return {
+    labId: membership.labId, runId: services.newId(), rigId: begin.rig.id, rigName: begin.rig.name, rigRevision: begin.rig.revision, protocolName: begin.protocol.name, protocolRevision: begin.revision,
+    protocol: begin.protocol, timeZone: membership.timeZone, operator: me.name, notes: begin.notes,
+  };
+}
+
+function refusalOfChecks({ checks }: StartReport): ProblemError | null {
+  const failed = checks.filter(({ state }) => state === 'fail');
+  const [first] = failed;
+  if (first === undefined) return null;
+  const code = failed.some((check) => check.code === 'free') ? 'rig-busy' : first.code === 'armed' ? 'not-armed' : 'not-ready';
+  const leading = code === 'rig-busy' ? failed.find((check) => check.code === 'free') ?? first : first;
+  const more = failed.length > 1 ? ` ${String(failed.length - 1)} more stand against a start.` : '';
+  return new ProblemError(code, `${leading.title}: ${leading.detail}${more}`, failed.map((check) => ({ path: check.code, message: `${check.title}: ${check.detail}`, code: check.code })));
+}
+
+/** Starts a run: checks, the row in the database, then the engine. */
+export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSetRecord }): Promise<RunRecord> {
+  const { services } = caller;
+  const document = { ...begin.rig.document, sources: begin.massSet.sources };
+  const refusal = refusalOf(checkProtocol(begin.protocol, document));
+  if (refusal !== null) throw refusal;
+  const report = await makeStartChecks(services, { rig: begin.rig, document, protocol: begin.protocol, timeZone: caller.membership.timeZone });
+  const stands = refusalOfChecks(report);
+  if (stands !== null) throw stands;
+  const arm = services.arms.armOf(begin.rig.id);
+  const start: RunStart = {
+    ...runStartOf(caller, begin), rig: document, massSetLabel: begin.massSet.label, simulated: null,
+    arm: arm === null ? null : { name: arm.name, untilUtcMs: arm.untilUtcMs },
+  };
+  try {
+    services.supervisor.assertMayStart(start);
+    const run = await storeStart(caller, start, { begin, massSetId: begin.massSet.id, finishUtcMs: report.finishUtcMs });
+    drive(services, run);
+    return run;
+  } catch (error) {
+    if (!(error instanceof StartRefused)) throw error;
+    throw new ProblemError(error.code, error.message, error.findings.map((finding) => ({ path: finding.path ?? '', message: finding.message, code: finding.code })));
+  }
+}
+
+async function storeStart(caller: Caller, start: RunStart, with_: { begin: Begin; massSetId: string; finishUtcMs: number }): Promise<RunRecord> {
+  const { services } = caller;
+  const { db } = services.database;
+  const entry = { kind: 'run.started', data: () => ({ runId: start.runId, rigId: start.rigId, protocolId: with_.begin.protocolId, revision: start.protocolRevision, arm: start.arm }) };
+  await audited(caller, entry, async (tx) => {
+    const row = { start, protocolId: with_.begin.protocolId, massSetId: with_.massSetId, state: 'starting' as const, nowUtcMs: services.clock.utcMs(), predictedEndUtcMs: with_.finishUtcMs };
+    if (await insertRun(tx, row)) return;
+    const other = (await activeRuns(db, start.labId)).get(start.rigId);
+    throw new ProblemError('rig-busy', other === undefined ? `${start.rigName} was taken by another run this very moment.` : busyWords(other));
+  });
+  const run = await findRun(db, start.labId, start.runId);
+  if (run === null) throw new Error('the new run was not found');
+  return run;
+}
+
+function drive(services: Services, run: RunRecord): void {
+  services.activeRuns.add(run);
+  try {
+    services.supervisor.startRun(run.start);
+  } catch (error) {
+    services.activeRuns.remove(run.id);
+    const why = error instanceof Error ? error.message : String(error);
+    markRunFailed(services.database.db, run, { why, nowUtcMs: services.clock.utcMs() }).catch((failure: unknown) => services.log.error({ err: failure, runId: run.id }, 'a run that did not start could not be marked'));
+    throw error;
+  }
+  services.access.refresh(services.activeRuns.labIds()).catch((error: unknown) => services.log.warn({ err: error }, 'sessions could not be copied into memory'));
+}
+
+const rehearsalRateHz = 10;
+
+/** Queues a rehearsal: a run on the simulated rig in fast time, which takes nobody's rig. */
+export async function beginRehearsal(caller: Caller, begin: Begin & { seed: number }): Promise<RunRecord> {
+  const { services, membership } = caller;
+  const refusal = refusalOf(checkProtocol(begin.protocol, begin.rig.document));
+  if (refusal !== null) throw refusal;
+  const nowUtcMs = services.clock.utcMs();
+  const start: RunStart = {
+    ...runStartOf(caller, begin), rig: begin.rig.document, massSetLabel: 'As in the rig document', arm: null,
+    simulated: { trueG: CODATA_2022_G.value, seed: begin.seed, rateHz: rehearsalRateHz, faults: [] },
+  };
+  await services.database.db.transaction(async (tx) => {
+    await insertRun(tx, { start, protocolId: begin.protocolId, massSetId: null, state: 'rehearsing', nowUtcMs, predictedEndUtcMs: null });
+    const payload: RehearsalJob = { labId: membership.labId, runId: start.runId };
+    await enqueueJob(tx, { kind: rehearsalJobKind, payload, labId: membership.labId, nowUtcMs, maxAttempts: 2 });
+  });
+  services.pokeJobs();
+  const run = await findRun(services.database.db, membership.labId, start.runId);
+  if (run === null) throw new Error('the new rehearsal was not found');
+  return run;
+}

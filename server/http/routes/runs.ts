@@ -1,0 +1,166 @@
+import type { Response } from 'express';
+import * as contracts from '@/shared/contracts/runs';
+import { stepsCsv } from '@/shared/archive/step-csv';
+import type { Answer, RunDriver } from '@/server/engine/run-driver';
+import { appendAudit } from '@/server/store/audit';
+import { findProtocol, findRevision } from '@/server/store/protocols';
+import { findMassSet, findRig } from '@/server/store/rigs';
+import * as store from '@/server/store/runs-read';
+import { archiveInputOf, assertEnded } from '../archive-input';
+import { assertFreshTap, beginRehearsal, beginRun, type Caller } from '../begin-run';
+import { isoOf } from '../maker';
+import { decodeCursor, pageFrom } from '../paging';
+import { notFound, ProblemError } from '../problem-error';
+import { mount } from '../route-context';
+import { runSummaryOf, storedRunView } from '../run-view';
+import type { Services } from '../services';
+
+async function load(services: Services, labId: string, runId: string): Promise<store.RunRecord> {
+  const run = await store.findRun(services.database.db, labId, runId);
+  if (run === null) throw notFound('run');
+  return run;
+}
+
+const startRoutes = [
+  mount(contracts.listRuns, async ({ query, membership, services }) => {
+    const after = decodeCursor(query.cursor, ['number', 'string']);
+    const rows = await store.listRuns(services.database.db, {
+      labId: membership.labId, rigId: query.rigId, activeOnly: query.active === 'true', after: after === null ? null : { createdAt: after[0], id: after[1] }, limit: query.limit + 1,
+    });
+    const page = pageFrom(rows, query.limit, (row) => [row.createdAt, row.id]);
+    return { items: page.items.map(runSummaryOf), next: page.next };
+  }),
+
+  mount(contracts.startRun, async (context) => {
+    const { body, membership, services } = context;
+    const { db } = services.database;
+    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'start');
+    const rig = await findRig(db, membership.labId, body.rigId);
+    if (rig === null) throw notFound('rig');
+    const revision = await findRevision(db, { labId: membership.labId, protocolId: body.protocolId }, body.revision);
+    if (revision === null) throw notFound('protocol revision');
+    const massSet = await findMassSet(db, { labId: membership.labId, rigId: rig.id }, body.massSetId);
+    if (massSet === null) throw notFound('mass set');
+    const run = await beginRun(context, { rig, protocolId: body.protocolId, protocol: revision.document, revision: revision.number, massSet, notes: body.notes });
+    return runSummaryOf(run);
+  }),
+
+  mount(contracts.rehearse, async (context) => {
+    const { body, membership, services } = context;
+    const { db } = services.database;
+    const rig = await findRig(db, membership.labId, body.rigId);
+    if (rig === null) throw notFound('rig');
+    const protocol = await findProtocol(db, membership.labId, body.protocolId);
+    if (protocol === null) throw notFound('protocol');
+    const revision = body.revision === undefined ? null : await findRevision(db, { labId: membership.labId, protocolId: protocol.id }, body.revision);
+    if (body.revision !== undefined && revision === null) throw notFound('protocol revision');
+    const run = await beginRehearsal(context, { rig, protocolId: protocol.id, protocol: revision?.document ?? protocol.document, revision: revision?.number ?? 0, notes: '', seed: body.seed });
+    return runSummaryOf(run);
+  }),
+
+  mount(contracts.getRun, async ({ params, membership, services }) => {
+    const view = services.activeRuns.view(membership.labId, params.runId);
+    return view ?? storedRunView(services, await load(services, membership.labId, params.runId));
+  }),
+];
+
+/** The driver of a run; for one that is over, or that nobody drives, the reason why nothing can be done with it. */
+async function driverOf(services: Services, labId: string, runId: string): Promise<RunDriver> {
+  const found = services.activeRuns.find(labId, runId);
+  if (found !== null) return found.driver;
+  const run = await load(services, labId, runId);
+  if (run.rehearsal) throw new ProblemError('not-possible-now', 'A rehearsal runs by itself in fast time; nobody can step in.');
+  const blocked = services.supervisor.quarantinedOf(run.rigId);
+  if (blocked !== null && blocked.start.runId === runId) throw new ProblemError('not-possible-now', `${blocked.why} Use the switch at the rig if anything moves.`);
+  throw new ProblemError('not-possible-now', `The run is over: it ${run.state === 'failed' ? 'failed' : `was ${run.state}`}.`);
+}
+
+/** Enters what a person did into the audit chain when the database can be reached; the act itself does not wait for it. */
+function auditLater({ me, membership, services }: Caller, kind: string, runId: string): void {
+  const fact = { labId: membership.labId, who: { id: me.userId, name: me.name }, kind, data: { runId }, utcMs: services.clock.utcMs() };
+  services.background(services.database.db.transaction((tx) => appendAudit(tx, fact, services.sha256)), 'an entry of the audit chain');
+}
+
+function accepted(runId: string, answer: Answer): { runId: string; serverAt: string } {
+  if (!answer.ok) throw new ProblemError('not-possible-now', answer.why);
+  return { runId, serverAt: isoOf(answer.serverAtUtcMs) };
+}
+
+const interventionRoutes = [
+  mount(contracts.holdRun, async (context) => {
+    const { params, me, membership, services } = context;
+    const answer = (await driverOf(services, membership.labId, params.runId)).hold(me.name);
+    auditLater(context, 'run.hold-asked', params.runId);
+    return accepted(params.runId, answer);
+  }),
+
+  mount(contracts.holdAfterDwell, async (context) => {
+    const { params, me, membership, services } = context;
+    const answer = (await driverOf(services, membership.labId, params.runId)).holdAfterDwell(me.name);
+    auditLater(context, 'run.hold-after-dwell-asked', params.runId);
+    return accepted(params.runId, answer);
+  }),
+
+  mount(contracts.resumeRun, async (context) => {
+    const { params, body, me, membership, services } = context;
+    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'resume');
+    const driver = await driverOf(services, membership.labId, params.runId);
+    const { rigId } = (services.activeRuns.find(membership.labId, params.runId) ?? { run: { rigId: '' } }).run;
+    const answer = await driver.resume(me.name);
+    if (!answer.ok) throw new ProblemError(driver.state().state === 'held' && services.arms.armOf(rigId) === null ? 'not-armed' : 'not-possible-now', answer.why);
+    auditLater(context, 'run.resumed', params.runId);
+    return accepted(params.runId, answer);
+  }),
+
+  mount(contracts.stopRun, async (context) => {
+    const { params, me, membership, services } = context;
+    const found = services.activeRuns.find(membership.labId, params.runId);
+    if (found === null) {
+      const run = await load(services, membership.labId, params.runId);
+      if (run.state === 'stopped') return { runId: run.id, serverAt: isoOf(services.clock.utcMs()) };
+    }
+    const answer = (await driverOf(services, membership.labId, params.runId)).stop(me.name);
+    auditLater(context, 'run.stop-asked', params.runId);
+    return accepted(params.runId, answer);
+  }),
+];
+
+/** A name that says what the file is, with nothing in it that a file system or a header could misread. */
+function attach(res: Response, run: store.RunRecord, ending: string): void {
+  const name = run.protocolName.toLowerCase().replaceAll(/[^a-z0-9]+/g, '-').replaceAll(/^-|-$/g, '').slice(0, 40) || 'run';
+  const day = isoOf(run.startedAt ?? run.createdAt).slice(0, 10);
+  res.set('Content-Disposition', `attachment; filename="evenfall-${day}-${name}-${run.id.slice(0, 8)}${ending}"`);
+}
+
+const recordRoutes = [
+  mount(contracts.listSteps, async ({ params, membership, services }) => {
+    const run = await load(services, membership.labId, params.runId);
+    return { items: await store.readSteps(services.database.db, run.labId, run.id) };
+  }),
+
+  mount(contracts.stepsCsv, async ({ params, membership, services, res }) => {
+    const run = await load(services, membership.labId, params.runId);
+    const text = stepsCsv(await store.readSteps(services.database.db, run.labId, run.id));
+    attach(res, run, '-steps.csv');
+    res.type('text/csv').send(text);
+    return undefined;
+  }),
+
+  mount(contracts.listEvents, async ({ params, query, membership, services }) => {
+    const run = await load(services, membership.labId, params.runId);
+    const [afterSeq] = decodeCursor(query.cursor, ['number']) ?? [0];
+    const events = await store.readEvents(services.database.db, { labId: run.labId, runId: run.id }, { afterSeq, limit: query.limit + 1 });
+    return pageFrom(events, query.limit, (event) => [event.seq]);
+  }),
+
+  mount(contracts.downloadArchive, async ({ params, membership, services, res }) => {
+    const run = await load(services, membership.labId, params.runId);
+    assertEnded(run);
+    const zip = await services.tasks.zipArchive(await archiveInputOf(services, run));
+    attach(res, run, '.zip');
+    res.type('application/zip').send(Buffer.from(zip.buffer, zip.byteOffset, zip.byteLength));
+    return undefined;
+  }),
+];
+
+export const runRoutes = [...startRoutes, ...interventionRoutes, ...recordRoutes];

@@ -1,0 +1,30 @@
+import * as z from 'zod';
+import type { Job } from '@/server/interfaces/jobs';
+import { beginEvaluation, endEvaluation } from '@/server/store/evaluations';
+import { findRun } from '@/server/store/runs-read';
+import { archiveInputOf } from '../archive-input';
+import type { Services } from '../services';
+
+const payloadSchema = z.strictObject({ labId: z.string(), evaluationId: z.string() });
+
+/** Evaluates a run in a worker thread, from the very archive that a reviewer would download. */
+export async function workEvaluation(services: Services, job: Job): Promise<void> {
+  const payload = payloadSchema.parse(job.payload);
+  const { db } = services.database;
+  const evaluation = await beginEvaluation(db, payload);
+  if (evaluation === null) return;
+  const run = await findRun(db, evaluation.labId, evaluation.runId);
+  if (run === null) throw new Error('the run of an evaluation is gone');
+  try {
+    const { result, curves } = await services.tasks.evaluate(await archiveInputOf(services, run), { channel: evaluation.channel });
+    await endEvaluation(db, payload, { result, curves, channel: evaluation.channel, finishedAt: services.clock.utcMs() });
+  } catch (error) {
+    if (!isUnusable(error) && job.attempt < job.maxAttempts) throw error;
+    const why = error instanceof Error ? error.message : String(error);
+    await endEvaluation(db, payload, { error: why, finishedAt: services.clock.utcMs() });
+    if (!isUnusable(error)) services.log.error({ err: error, runId: run.id }, 'an evaluation failed');
+  }
+}
+
+/** The data are at fault, not the program: trying again gives the same. */
+const isUnusable = (error: unknown) => error instanceof Error && (error.name === 'UnusableArchive' || ('code' in error && error.code === 'not-yet'));

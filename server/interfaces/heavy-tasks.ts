@@ -1,0 +1,27 @@
+import type { BuildArchiveInput } from '@/shared/archive/build-archive';
+import type { ChainedEvent, ChannelSeries, RunStart, SimulatedRun, StepRow } from '@/shared/archive/run-records';
+import type { EvaluationResult, FitCurve } from '@/shared/evaluation/result';
+
+/** What a rehearsal leaves to be stored. */
+export interface RehearsalRecords {
+  outcome: 'finished' | 'held' | 'stopped' | 'failed';
+  /** Why it did not finish; empty when it did. */
+  reason: string;
+  steps: StepRow[];
+  events: ChainedEvent[];
+  channels: ChannelSeries[];
+  startedAtUtcMs: number | null;
+  endedAtUtcMs: number;
+}
+
+/** Work of seconds that must not hold up the loop which drives the rigs: done in worker threads. */
+export interface HeavyTasks {
+  rehearse(input: { start: RunStart & { simulated: SimulatedRun }; startUtcMs: number }): Promise<RehearsalRecords>;
+  /** The archive of a run as a ZIP. */
+  zipArchive(input: BuildArchiveInput): Promise<Uint8Array>;
+  /**
+   * Evaluates the archive that `zipArchive` would give.
+   * @throws Error whose message says what makes the archive unusable
+   */
+  evaluate(input: BuildArchiveInput, options: { channel: string | null }): Promise<{ result: EvaluationResult; curves: FitCurve[] }>;
+}
