@@ -1,4 +1,4 @@
-import { useLocalSearchParams } from 'expo-router';
+import { useLocalSearchParams, type Href } from 'expo-router';
 import { View } from 'react-native';
 import { useLab, wordsOf } from '@/components/api';
 import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, useWide } from '@/components/ui';
@@ -19,7 +19,7 @@ import { useLiveRun, type LiveRun } from './use-live-run';
 import { useNow } from './use-now';
 import { useRunStrip } from './use-run-strip';
 
-const back = { href: '/runs' as const, label: 'Runs' };
+const back = { href: '/runs' as Href, label: 'Runs' };
 
 /** A run: watched and held or stopped while it goes on, summed up once it is over. */
 export function RunScreen() {

@@ -71,7 +71,7 @@ function Filters({ rows, filter, onChange }: { rows: readonly StepRowView[]; fil
   const active = filter !== noFilter && Object.values(filter).some((value) => value !== everything);
   if (!wide && !shown) return <Button icon="filter" label={active ? 'Filter is on' : 'Filter'} onPress={() => setShown(true)} expanded={false} className="self-start" testID="filter" />;
   return (
-    <View className="gap-3 wide:flex-row" role="search" aria-label="Filter of the step log">
+    <View className="gap-3 wide:flex-row" role="group" aria-label="Filter of the step log">
       <View className="wide:w-[190px]">
         <Select label="Kind" value={filter.kind} options={optionsOf('every kind', choices.kind)} onChange={(kind) => onChange({ ...filter, kind })} testID="filter-kind" />
       </View>

@@ -1,0 +1,114 @@
+import { useLocalSearchParams, type Href } from 'expo-router';
+import { useState } from 'react';
+import { View } from 'react-native';
+import { addressOf, useLab, useLabQuery, wordsOf } from '@/components/api';
+import { ReversalPlot } from '@/components/charts';
+import { DownloadLink } from '@/components/runs/download-link';
+import { Body, Icon, Label, Loading, Panel, ProblemNotice, Screen, Section, useWide } from '@/components/ui';
+import type { EvaluationView } from '@/shared/contracts/evaluations';
+import { downloadArchive, getRun, type RunView } from '@/shared/contracts/runs';
+import type { EvaluationResult } from '@/shared/evaluation/result';
+import { formatDayAndClock } from '@/shared/lib/format-time';
+import { BudgetPanel } from './budget-panel';
+import { DwellList } from './dwell-list';
+import { EvaluatePanel } from './evaluate-panel';
+import { registeredWords } from './evaluation-words';
+import { FiguresPanel } from './figures-panel';
+import { FitPanel } from './fit-panel';
+import { GPanel } from './g-panel';
+import { useEvaluation, useEvaluations } from './use-evaluations';
+
+/** The newest evaluation of a run: G, how well it is known and why, and everything it was made from. */
+export function EvaluationScreen() {
+  const { runId } = useLocalSearchParams<{ runId: string }>();
+  const run = useLabQuery(getRun, { params: { runId } });
+  const evaluations = useEvaluations(runId);
+  const full = useEvaluation(evaluations.done?.id ?? null);
+  const view = run.data?.data ?? null;
+  const failed = run.error ?? evaluations.list.error;
+  const evaluation = full.data?.data ?? null;
+  const panel = <EvaluatePanel runId={runId} evaluations={evaluations} registeredChannel={view?.protocol.evaluation?.channel ?? null} />;
+  const back = { href: `/runs/${runId}` as Href, label: 'the run' };
+  if (evaluation === null || evaluation.result === null || view === null) {
+    return (
+      <Screen title="Evaluation" back={back}>
+        {failed !== null ? <ProblemNotice title="The evaluation could not be loaded" detail={wordsOf(failed).detail} /> : run.isPending || evaluations.list.isPending || (evaluations.done !== null && full.isPending) ? <Loading label="Loading the evaluation" /> : panel}
+      </Screen>
+    );
+  }
+  return <Evaluated view={view} evaluation={evaluation} result={evaluation.result} panel={panel} back={back} />;
+}
+
+interface EvaluatedProps {
+  view: RunView;
+  evaluation: EvaluationView;
+  result: EvaluationResult;
+  panel: React.ReactNode;
+  back: { href: Href; label: string };
+}
+
+function Evaluated({ view, evaluation, result, panel, back }: EvaluatedProps) {
+  const { labId, timeZone } = useLab();
+  const wide = useWide();
+  const curves = evaluation.curves ?? [];
+  const [selected, setSelected] = useState<number | null>(curves[0]?.seq ?? null);
+  const dwells = <DwellList dwells={result.dwells} selected={selected} onSelect={setSelected} />;
+  const fit = <FitPanel curves={curves} selected={selected} onSelect={setSelected} />;
+  return (
+    <Screen
+      title="Evaluation"
+      back={back}
+      testID="evaluation-screen"
+      asideOnlyWide
+      aside={
+        <>
+          {fit}
+          {dwells}
+        </>
+      }
+    >
+      <GPanel result={result} heading={view.rehearsal ? 'G of a rehearsal' : 'G of this run'} registered={registeredWords(result, view.protocol, evaluation.channel)} trueG={view.simulated?.trueG ?? null} />
+      <FiguresPanel result={result} />
+      <Warnings warnings={result.warnings} />
+      <Section title="Reversals" remark="Near − far of adjacent dwells; the band is the mean ± u.">
+        <ReversalPlot result={result} />
+      </Section>
+      {wide ? null : fit}
+      {wide ? null : dwells}
+      <BudgetPanel lines={result.budget} rig={view.rig} />
+      <Chain chain={result.chain} />
+      <View className="flex-row flex-wrap items-center gap-3">
+        <DownloadLink framed label="Archive of the run" address={addressOf(downloadArchive, { params: { labId, runId: view.id } })} fileName={`evenfall-${view.id}.zip`} testID="archive" />
+      </View>
+      <Label>
+        Evaluated {formatDayAndClock(Date.parse(evaluation.createdAt), timeZone)} by {evaluation.createdBy}
+        {evaluation.channel === null ? '' : `, channel ${evaluation.channel}`}. Whoever has the archive can compute this again.
+      </Label>
+      {panel}
+    </Screen>
+  );
+}
+
+function Warnings({ warnings }: { warnings: EvaluationResult['warnings'] }) {
+  if (warnings.length === 0) return null;
+  return (
+    <Panel edge="lamp" className="gap-2" testID="warnings">
+      {warnings.map((warning) => (
+        <View key={warning.code + warning.message} className="flex-row items-start gap-2">
+          <Icon name="warning" size={18} tone="lamp" />
+          <Body className="min-w-0 flex-1">{warning.message}</Body>
+        </View>
+      ))}
+    </Panel>
+  );
+}
+
+function Chain({ chain }: { chain: EvaluationResult['chain'] }) {
+  const whole = chain.valid === true;
+  return (
+    <View className="flex-row items-center gap-2" testID="chain">
+      <Icon name={whole ? 'passed' : 'note'} size={18} tone={whole ? 'good' : 'dim'} />
+      <Label className="shrink">{whole ? `The chain of ${chain.events} events is whole and unchanged.` : 'There is no event chain to check.'}</Label>
+    </View>
+  );
+}

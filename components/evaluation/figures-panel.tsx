@@ -1,0 +1,28 @@
+import { View } from 'react-native';
+import { Label, Panel } from '@/components/ui';
+import type { EvaluationResult } from '@/shared/evaluation/result';
+import { UncertainText } from './uncertain-text';
+
+/** Near − far, period, decay time, κ and the clock offset, each with its uncertainty. */
+export function FiguresPanel({ result }: { result: EvaluationResult }) {
+  const { reversal_rad: reversal, period_s: period, decayTime_s: decay, kappa_N_m: kappa, alignment } = result;
+  const offset = alignment?.clockOffset_s ?? null;
+  return (
+    <Panel className="flex-row flex-wrap gap-x-8 gap-y-4" testID="figures">
+      {reversal === null ? null : <Figure name={`near − far, ${reversal.count} reversal${reversal.count === 1 ? '' : 's'}`} value={reversal.value * 1e3} u={reversal.u === null ? null : reversal.u * 1e3} unit="mrad" />}
+      {period === null ? null : <Figure name="damped period" {...period} unit="s" />}
+      {decay === null ? null : <Figure name="decay time" {...decay} unit="s" />}
+      {kappa === null ? null : <Figure name="κ of the fibre" {...kappa} unit={'N\u202fm'} />}
+      {offset === null ? null : <Figure name={alignment?.applied ? 'clock offset, applied' : 'clock offset, not applied'} {...offset} unit="s" />}
+    </Panel>
+  );
+}
+
+function Figure({ name, ...quantity }: { name: string; value: number; u: number | null; unit: string }) {
+  return (
+    <View className="min-w-[140px]">
+      <UncertainText {...quantity} size={20} />
+      <Label>{name}</Label>
+    </View>
+  );
+}
