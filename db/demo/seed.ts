@@ -16,7 +16,10 @@ export interface DemoPerson {
 }
 
 const person = (number: number, name: string, role: Role): DemoPerson => ({
-  id: `5eed0000-0000-4000-8000-0000000000${String(number).padStart(2, '0')}`, name, email: `${name.split(' ')[0]?.toLowerCase() ?? ''}@quillfen.example`, role,
+  id: `5eed0000-0000-4000-8000-0000000000${String(number).padStart(2, '0')}`,
+  name,
+  email: `${name.split(' ')[0]?.toLowerCase() ?? ''}@quillfen.example`,
+  role,
 });
 
 /** Invented people, one for each role. */
@@ -56,7 +59,11 @@ export interface SeedParts {
 export async function seedDemo(connection: Connection, parts: SeedParts): Promise<boolean> {
   const passwordHash = await parts.hashPassword(demoPassword);
   return connection.db.transaction(async (tx) => {
-    const made = await tx.insert(schema.labs).values({ id: demoIds.lab, ...demoLab, createdAt: parts.nowUtcMs }).onConflictDoNothing().returning({ id: schema.labs.id });
+    const made = await tx
+      .insert(schema.labs)
+      .values({ id: demoIds.lab, ...demoLab, createdAt: parts.nowUtcMs })
+      .onConflictDoNothing()
+      .returning({ id: schema.labs.id });
     if (made.length === 0) return false;
     await seedPeople(tx, parts.nowUtcMs, passwordHash);
     await seedRig(tx, parts.nowUtcMs);
@@ -74,7 +81,9 @@ const withRole = (role: Role): DemoPerson => {
 };
 
 async function seedPeople(tx: Handle, nowUtcMs: number, passwordHash: string): Promise<void> {
-  await tx.insert(schema.users).values(demoPeople.map(({ id, name, email }) => ({ id, name, email, passwordHash, demo: true, createdAt: nowUtcMs })));
+  await tx
+    .insert(schema.users)
+    .values(demoPeople.map(({ id, name, email }) => ({ id, name, email, passwordHash, demo: true, createdAt: nowUtcMs })));
   await tx.insert(schema.memberships).values(demoPeople.map(({ id, role }) => ({ labId: demoIds.lab, userId: id, role, since: nowUtcMs })));
 }
 
@@ -82,14 +91,36 @@ async function seedRig(tx: Handle, nowUtcMs: number): Promise<void> {
   const keeper = withRole('keeper');
   const own = { labId: demoIds.lab, rigId: demoIds.rig };
   await tx.insert(schema.rigs).values({ labId: demoIds.lab, id: demoIds.rig, name: demoRigName, revision: 1, createdAt: nowUtcMs });
-  await tx.insert(schema.rigRevisions).values({ ...own, number: 1, name: demoRigName, document: demoRigWide, reason: 'First measurement of the rig', madeAt: nowUtcMs, madeById: keeper.id, madeBy: keeper.name });
+  await tx
+    .insert(schema.rigRevisions)
+    .values({
+      ...own,
+      number: 1,
+      name: demoRigName,
+      document: demoRigWide,
+      reason: 'First measurement of the rig',
+      madeAt: nowUtcMs,
+      madeById: keeper.id,
+      madeBy: keeper.name,
+    });
   await tx.insert(schema.rigLinks).values({ ...own, settings: { kind: 'simulated' }, changedAt: nowUtcMs, changedBy: keeper.name });
   await tx.insert(schema.massSets).values([
     { ...own, id: demoIds.massSet, label: 'Lead spheres, 1.6 kg', sources: demoRigWide.sources, createdAt: nowUtcMs },
     // Mass sets are offered oldest first: the loaded one before the control.
     { ...own, id: demoIds.emptyControl, label: 'Empty control', sources: { shape: 'none' }, createdAt: nowUtcMs + 1 },
   ]);
-  await tx.insert(schema.channels).values({ ...own, id: demoIds.channel, name: 'deflection', quantity: 'pendulum angle', unit: 'rad', role: 'deflection', source: 'simulated', createdAt: nowUtcMs });
+  await tx
+    .insert(schema.channels)
+    .values({
+      ...own,
+      id: demoIds.channel,
+      name: 'deflection',
+      quantity: 'pendulum angle',
+      unit: 'rad',
+      role: 'deflection',
+      source: 'simulated',
+      createdAt: nowUtcMs,
+    });
 }
 
 const documentOf = (templateId: string) => {
@@ -109,7 +140,17 @@ async function seedProtocols(tx: Handle, { nowUtcMs, sha256 }: SeedParts): Promi
     { ...updated, id: demoIds.overnightProtocol, name: overnight.name, document: overnight },
   ]);
   await tx.insert(schema.protocolRevisions).values({
-    labId: demoIds.lab, protocolId: demoIds.shortProtocol, number: 1, document: short, sha256: sha256(canonicalJson(short)), note: 'First issue', draftVersion: 1,
-    rigId: demoIds.rig, rigRevision: 1, issuedAt: nowUtcMs, issuedById: operator.id, issuedBy: operator.name,
+    labId: demoIds.lab,
+    protocolId: demoIds.shortProtocol,
+    number: 1,
+    document: short,
+    sha256: sha256(canonicalJson(short)),
+    note: 'First issue',
+    draftVersion: 1,
+    rigId: demoIds.rig,
+    rigRevision: 1,
+    issuedAt: nowUtcMs,
+    issuedById: operator.id,
+    issuedBy: operator.name,
   });
 }

@@ -12,7 +12,9 @@ export const channels = pgTable(
   'channels',
   {
     labId: key('lab_id').notNull(),
-    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
     rigId: key('rig_id').notNull(),
     /** Set for a channel of one run alone (a rehearsal's), whose instants may lie over those of other runs. */
     runId: key('run_id'),
@@ -27,8 +29,12 @@ export const channels = pgTable(
     primaryKey({ columns: [table.labId, table.id] }),
     foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
     foreignKey({ columns: [table.labId, table.runId], foreignColumns: [runs.labId, runs.id] }),
-    uniqueIndex('channels_name_of_rig').on(table.labId, table.rigId, table.name).where(sql`${table.runId} is null`),
-    uniqueIndex('channels_name_of_run').on(table.labId, table.runId, table.name).where(sql`${table.runId} is not null`),
+    uniqueIndex('channels_name_of_rig')
+      .on(table.labId, table.rigId, table.name)
+      .where(sql`${table.runId} is null`),
+    uniqueIndex('channels_name_of_run')
+      .on(table.labId, table.runId, table.name)
+      .where(sql`${table.runId} is not null`),
   ],
 );
 
@@ -53,7 +59,9 @@ export const imports = pgTable(
   'imports',
   {
     labId: key('lab_id').notNull(),
-    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
     runId: key('run_id').notNull(),
     fileName: text('file_name').notNull(),
     state: text('state', { enum: ['waiting', 'received', 'stored', 'refused'] }).notNull(),
@@ -97,8 +105,12 @@ export const importPieces = pgTable(
 export const evaluations = pgTable(
   'evaluations',
   {
-    labId: key('lab_id').notNull().references(() => labs.id),
-    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    labId: key('lab_id')
+      .notNull()
+      .references(() => labs.id),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
     runId: key('run_id').notNull(),
     state: text('state', { enum: ['queued', 'running', 'done', 'failed'] }).notNull(),
     channel: text('channel'),

@@ -3,7 +3,9 @@ import { bigint, json, pgTable, primaryKey, text } from 'drizzle-orm/pg-core';
 import { instant, key } from './columns';
 
 export const labs = pgTable('labs', {
-  id: key('id').primaryKey().default(sql`gen_random_uuid()`),
+  id: key('id')
+    .primaryKey()
+    .default(sql`gen_random_uuid()`),
   name: text('name').notNull(),
   /** IANA zone. */
   timeZone: text('time_zone').notNull(),
@@ -18,7 +20,9 @@ export const labs = pgTable('labs', {
 export const audit = pgTable(
   'audit',
   {
-    labId: key('lab_id').notNull().references(() => labs.id),
+    labId: key('lab_id')
+      .notNull()
+      .references(() => labs.id),
     seq: bigint('seq', { mode: 'number' }).notNull(),
     /** ISO 8601 UTC exactly as hashed. */
     at: text('at').notNull(),

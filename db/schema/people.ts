@@ -7,7 +7,9 @@ import { labs } from './labs';
 export const users = pgTable(
   'users',
   {
-    id: key('id').primaryKey().default(sql`gen_random_uuid()`),
+    id: key('id')
+      .primaryKey()
+      .default(sql`gen_random_uuid()`),
     name: text('name').notNull(),
     /** In lower case. */
     email: text('email').notNull(),
@@ -23,8 +25,12 @@ export const users = pgTable(
 export const memberships = pgTable(
   'memberships',
   {
-    labId: key('lab_id').notNull().references(() => labs.id),
-    userId: key('user_id').notNull().references(() => users.id),
+    labId: key('lab_id')
+      .notNull()
+      .references(() => labs.id),
+    userId: key('user_id')
+      .notNull()
+      .references(() => users.id),
     role: text('role', { enum: roles }).notNull(),
     since: instant('since').notNull(),
   },
@@ -40,7 +46,9 @@ export const sessions = pgTable(
   'sessions',
   {
     id: text('id').primaryKey(),
-    userId: key('user_id').notNull().references(() => users.id, { onDelete: 'cascade' }),
+    userId: key('user_id')
+      .notNull()
+      .references(() => users.id, { onDelete: 'cascade' }),
     /** End of the idle limit, moved on while the session is used. */
     expiresAt: timestamp('expires_at', { withTimezone: true, mode: 'date' }).notNull(),
     /** End of the absolute limit, never moved. */
@@ -57,7 +65,9 @@ export const passwordResets = pgTable(
   'password_resets',
   {
     tokenHash: text('token_hash').primaryKey(),
-    userId: key('user_id').notNull().references(() => users.id, { onDelete: 'cascade' }),
+    userId: key('user_id')
+      .notNull()
+      .references(() => users.id, { onDelete: 'cascade' }),
     createdAt: instant('created_at').notNull(),
     expiresAt: instant('expires_at').notNull(),
     usedAt: instant('used_at'),
@@ -68,12 +78,18 @@ export const passwordResets = pgTable(
 export const invitations = pgTable(
   'invitations',
   {
-    labId: key('lab_id').notNull().references(() => labs.id),
-    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    labId: key('lab_id')
+      .notNull()
+      .references(() => labs.id),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
     tokenHash: text('token_hash').notNull(),
     email: text('email').notNull(),
     role: text('role', { enum: roles }).notNull(),
-    invitedById: key('invited_by_id').notNull().references(() => users.id),
+    invitedById: key('invited_by_id')
+      .notNull()
+      .references(() => users.id),
     createdAt: instant('created_at').notNull(),
     expiresAt: instant('expires_at').notNull(),
     acceptedAt: instant('accepted_at'),

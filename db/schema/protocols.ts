@@ -10,14 +10,20 @@ import { rigRevisions } from './rigs';
 export const protocols = pgTable(
   'protocols',
   {
-    labId: key('lab_id').notNull().references(() => labs.id),
-    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    labId: key('lab_id')
+      .notNull()
+      .references(() => labs.id),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
     name: text('name').notNull(),
     document: json('document').$type<ProtocolDocument>().notNull(),
     /** Rises with each saved draft: the ETag. */
     version: integer('version').notNull().default(1),
     updatedAt: instant('updated_at').notNull(),
-    updatedById: key('updated_by_id').notNull().references(() => users.id),
+    updatedById: key('updated_by_id')
+      .notNull()
+      .references(() => users.id),
     updatedBy: text('updated_by').notNull(),
   },
   (table) => [primaryKey({ columns: [table.labId, table.id] })],
@@ -40,12 +46,18 @@ export const protocolRevisions = pgTable(
     rigId: key('rig_id').notNull(),
     rigRevision: integer('rig_revision').notNull(),
     issuedAt: instant('issued_at').notNull(),
-    issuedById: key('issued_by_id').notNull().references(() => users.id),
+    issuedById: key('issued_by_id')
+      .notNull()
+      .references(() => users.id),
     issuedBy: text('issued_by').notNull(),
   },
   (table) => [
     primaryKey({ columns: [table.labId, table.protocolId, table.number] }),
     foreignKey({ columns: [table.labId, table.protocolId], foreignColumns: [protocols.labId, protocols.id] }),
-    foreignKey({ name: 'protocol_revisions_rig_revision_fk', columns: [table.labId, table.rigId, table.rigRevision], foreignColumns: [rigRevisions.labId, rigRevisions.rigId, rigRevisions.number] }),
+    foreignKey({
+      name: 'protocol_revisions_rig_revision_fk',
+      columns: [table.labId, table.rigId, table.rigRevision],
+      foreignColumns: [rigRevisions.labId, rigRevisions.rigId, rigRevisions.number],
+    }),
   ],
 );

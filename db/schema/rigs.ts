@@ -9,8 +9,12 @@ import { users } from './people';
 export const rigs = pgTable(
   'rigs',
   {
-    labId: key('lab_id').notNull().references(() => labs.id),
-    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    labId: key('lab_id')
+      .notNull()
+      .references(() => labs.id),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
     name: text('name').notNull(),
     /** Number of the revision that holds now. */
     revision: integer('revision').notNull(),
@@ -30,7 +34,9 @@ export const rigRevisions = pgTable(
     document: json('document').$type<RigDocument>().notNull(),
     reason: text('reason').notNull(),
     madeAt: instant('made_at').notNull(),
-    madeById: key('made_by_id').notNull().references(() => users.id),
+    madeById: key('made_by_id')
+      .notNull()
+      .references(() => users.id),
     madeBy: text('made_by').notNull(),
   },
   (table) => [
@@ -49,7 +55,10 @@ export const rigLinks = pgTable(
     changedAt: instant('changed_at').notNull(),
     changedBy: text('changed_by').notNull(),
   },
-  (table) => [primaryKey({ columns: [table.labId, table.rigId] }), foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] })],
+  (table) => [
+    primaryKey({ columns: [table.labId, table.rigId] }),
+    foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
+  ],
 );
 
 /** Which process drives the rig. `epoch` rises with each new holder and travels to the controller as a fence. */
@@ -62,7 +71,10 @@ export const rigLeases = pgTable(
     epoch: bigint('epoch', { mode: 'number' }).notNull(),
     untilAt: instant('until_at').notNull(),
   },
-  (table) => [primaryKey({ columns: [table.labId, table.rigId] }), foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] })],
+  (table) => [
+    primaryKey({ columns: [table.labId, table.rigId] }),
+    foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
+  ],
 );
 
 /** Somebody on site answers for the rig from `fromAt` until `untilAt`, or until the arm is ended earlier. */
@@ -70,20 +82,26 @@ export const arms = pgTable(
   'arms',
   {
     labId: key('lab_id').notNull(),
-    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
     rigId: key('rig_id').notNull(),
     name: text('name').notNull(),
     note: text('note').notNull().default(''),
     fromAt: instant('from_at').notNull(),
     untilAt: instant('until_at').notNull(),
-    armedById: key('armed_by_id').notNull().references(() => users.id),
+    armedById: key('armed_by_id')
+      .notNull()
+      .references(() => users.id),
     endedAt: instant('ended_at'),
     endedWhy: text('ended_why'),
   },
   (table) => [
     primaryKey({ columns: [table.labId, table.id] }),
     foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
-    uniqueIndex('arms_one_per_rig').on(table.labId, table.rigId).where(sql`${table.endedAt} is null`),
+    uniqueIndex('arms_one_per_rig')
+      .on(table.labId, table.rigId)
+      .where(sql`${table.endedAt} is null`),
     index('arms_rig').on(table.labId, table.rigId, table.fromAt),
     check('arms_length', sql`${table.untilAt} > ${table.fromAt} and ${table.untilAt} <= ${table.fromAt} + interval '72 hours'`),
   ],
@@ -93,7 +111,9 @@ export const massSets = pgTable(
   'mass_sets',
   {
     labId: key('lab_id').notNull(),
-    id: key('id').notNull().default(sql`gen_random_uuid()`),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
     rigId: key('rig_id').notNull(),
     label: text('label').notNull(),
     sources: json('sources').$type<RigDocument['sources']>().notNull(),

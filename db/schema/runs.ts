@@ -1,5 +1,17 @@
 import { sql } from 'drizzle-orm';
-import { boolean, check, doublePrecision, foreignKey, index, integer, json, pgTable, primaryKey, text, uniqueIndex } from 'drizzle-orm/pg-core';
+import {
+  boolean,
+  check,
+  doublePrecision,
+  foreignKey,
+  index,
+  integer,
+  json,
+  pgTable,
+  primaryKey,
+  text,
+  uniqueIndex,
+} from 'drizzle-orm/pg-core';
 import type { RunStart, StepOutcome, StepRow, StepRowKind } from '../../shared/archive/run-records';
 import type { RunState } from '../../shared/contracts/runs';
 import { instant, key } from './columns';
@@ -42,11 +54,17 @@ export const runs = pgTable(
   },
   (table) => [
     primaryKey({ columns: [table.labId, table.id] }),
-    foreignKey({ name: 'runs_rig_revision_fk', columns: [table.labId, table.rigId, table.rigRevision], foreignColumns: [rigRevisions.labId, rigRevisions.rigId, rigRevisions.number] }),
+    foreignKey({
+      name: 'runs_rig_revision_fk',
+      columns: [table.labId, table.rigId, table.rigRevision],
+      foreignColumns: [rigRevisions.labId, rigRevisions.rigId, rigRevisions.number],
+    }),
     foreignKey({ name: 'runs_protocol_fk', columns: [table.labId, table.protocolId], foreignColumns: [protocols.labId, protocols.id] }),
     foreignKey({ name: 'runs_mass_set_fk', columns: [table.labId, table.massSetId], foreignColumns: [massSets.labId, massSets.id] }),
     // The last word on "one run per rig", whatever two processes may think.
-    uniqueIndex('runs_one_per_rig').on(table.labId, table.rigId).where(sql`not ${table.rehearsal} and ${table.state} not in ('finished', 'stopped', 'failed')`),
+    uniqueIndex('runs_one_per_rig')
+      .on(table.labId, table.rigId)
+      .where(sql`not ${table.rehearsal} and ${table.state} not in ('finished', 'stopped', 'failed')`),
     index('runs_newest').on(table.labId, table.createdAt.desc()),
     check('runs_id_given', sql`${table.id} <> '00000000-0000-0000-0000-000000000000'`),
   ],
@@ -66,7 +84,10 @@ export const runEvents = pgTable(
     prev: text('prev').notNull(),
     hash: text('hash').notNull(),
   },
-  (table) => [primaryKey({ columns: [table.labId, table.runId, table.seq] }), foreignKey({ columns: [table.labId, table.runId], foreignColumns: [runs.labId, runs.id] })],
+  (table) => [
+    primaryKey({ columns: [table.labId, table.runId, table.seq] }),
+    foreignKey({ columns: [table.labId, table.runId], foreignColumns: [runs.labId, runs.id] }),
+  ],
 );
 
 /** The step log. */
@@ -93,5 +114,8 @@ export const runSteps = pgTable(
     uAngleDeg: doublePrecision('u_angle_deg'),
     good: boolean('good'),
   },
-  (table) => [primaryKey({ columns: [table.labId, table.runId, table.seq] }), foreignKey({ columns: [table.labId, table.runId], foreignColumns: [runs.labId, runs.id] })],
+  (table) => [
+    primaryKey({ columns: [table.labId, table.runId, table.seq] }),
+    foreignKey({ columns: [table.labId, table.runId], foreignColumns: [runs.labId, runs.id] }),
+  ],
 );

@@ -8,12 +8,16 @@ import { users } from './people';
 export const jobs = pgTable(
   'jobs',
   {
-    id: key('id').primaryKey().default(sql`gen_random_uuid()`),
+    id: key('id')
+      .primaryKey()
+      .default(sql`gen_random_uuid()`),
     /** Null for work of no lab, a password reset mail for example. */
     labId: key('lab_id').references(() => labs.id),
     kind: text('kind').notNull(),
     payload: json('payload').$type<unknown>().notNull(),
-    state: text('state', { enum: ['waiting', 'running', 'done', 'given-up'] }).notNull().default('waiting'),
+    state: text('state', { enum: ['waiting', 'running', 'done', 'given-up'] })
+      .notNull()
+      .default('waiting'),
     attempts: integer('attempts').notNull().default(0),
     maxAttempts: integer('max_attempts').notNull(),
     /** Not before this instant. */
@@ -24,14 +28,20 @@ export const jobs = pgTable(
     createdAt: instant('created_at').notNull(),
     finishedAt: instant('finished_at'),
   },
-  (table) => [index('jobs_open').on(table.dueAt).where(sql`${table.state} in ('waiting', 'running')`)],
+  (table) => [
+    index('jobs_open')
+      .on(table.dueAt)
+      .where(sql`${table.state} in ('waiting', 'running')`),
+  ],
 );
 
 /** The first answer to each command, so that a repeat gets it again and acts no second time. */
 export const idempotencyKeys = pgTable(
   'idempotency_keys',
   {
-    userId: key('user_id').notNull().references(() => users.id, { onDelete: 'cascade' }),
+    userId: key('user_id')
+      .notNull()
+      .references(() => users.id, { onDelete: 'cascade' }),
     key: text('key').notNull(),
     /** SHA-256 (hex) of method, path, preconditions and body. */
     fingerprint: text('fingerprint').notNull(),

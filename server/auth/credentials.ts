@@ -10,7 +10,10 @@ export type CredentialCheck = { kind: 'right'; user: User } | { kind: 'wrong' } 
  * Whether e-mail and password belong together. Answer and time are the same whether the address is unknown, the
  * password wrong or the account a demo account on a server that is no demo. Only failures count against the limits.
  */
-export async function checkCredentials(parts: Pick<AuthParts, 'db' | 'clock' | 'sha256' | 'demo'>, given: { email: string; password: string; ip: string }): Promise<CredentialCheck> {
+export async function checkCredentials(
+  parts: Pick<AuthParts, 'db' | 'clock' | 'sha256' | 'demo'>,
+  given: { email: string; password: string; ip: string },
+): Promise<CredentialCheck> {
   const email = normalEmail(given.email);
   const pair = { rule: rates.signInPair, subject: `${email} ${given.ip}` };
   const account = { rule: rates.signInAccount, subject: email };

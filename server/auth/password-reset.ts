@@ -8,7 +8,10 @@ import { countTry, rates } from './rates';
 import { auditInAllLabs } from './sign-in';
 
 /** Asks for a reset mail; known and unknown addresses are treated alike up to the sending itself. */
-export async function requestPasswordReset(parts: AuthParts, given: { email: string; ip: string; origin: string }): Promise<{ kind: 'asked' } | Wait> {
+export async function requestPasswordReset(
+  parts: AuthParts,
+  given: { email: string; ip: string; origin: string },
+): Promise<{ kind: 'asked' } | Wait> {
   const email = normalEmail(given.email);
   const wait = await countTry(parts, [
     { rule: rates.resetAccount, subject: email },
@@ -25,7 +28,10 @@ export type ResetOutcome = { kind: 'changed'; userId: string } | { kind: 'unknow
 class WeakPassword extends Error {}
 
 /** Sets a new password with a token of a mail and ends all sessions of the account. */
-export async function completePasswordReset(parts: AuthParts, given: { token: string; password: string; ip: string }): Promise<ResetOutcome> {
+export async function completePasswordReset(
+  parts: AuthParts,
+  given: { token: string; password: string; ip: string },
+): Promise<ResetOutcome> {
   const wait = await countTry(parts, [{ rule: rates.tokenAddress, subject: given.ip }]);
   if (wait !== null) return wait;
   const passwordHash = await hashPassword(given.password);
@@ -39,7 +45,11 @@ export async function completePasswordReset(parts: AuthParts, given: { token: st
   }
 }
 
-async function change(parts: AuthParts, given: { token: string; password: string; passwordHash: string }, tx: Transaction): Promise<ResetOutcome> {
+async function change(
+  parts: AuthParts,
+  given: { token: string; password: string; passwordHash: string },
+  tx: Transaction,
+): Promise<ResetOutcome> {
   const nowUtcMs = parts.clock.utcMs();
   const userId = await takePasswordReset(tx, parts.sha256(given.token), nowUtcMs);
   const user = userId === null ? null : await userById(tx, userId);

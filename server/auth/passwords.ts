@@ -32,12 +32,14 @@ const letters = (text: string) => text.replace(/[013457@$!]/g, (sign) => lookali
 export function weaknessOf(password: string, about: readonly string[]): string | null {
   const lower = password.normalize('NFKC').toLowerCase();
   const stems = [lower, trimmed(lower), letters(trimmed(lower)), letters(lower)];
-  if (stems.some((stem) => commonStems.has(stem) || commonStems.has(onceOf(stem)))) return 'this is one of the passwords tried first; choose a few words that do not belong together';
+  if (stems.some((stem) => commonStems.has(stem) || commonStems.has(onceOf(stem))))
+    return 'this is one of the passwords tried first; choose a few words that do not belong together';
   if (new Set(lower).size < 5) return 'it is made of fewer than five different characters; choose a few words that do not belong together';
   if (isSequence(lower)) return 'it follows the alphabet, the digits or the keyboard; choose a few words that do not belong together';
   const known = about.flatMap((text) => text.toLowerCase().split(/[^\p{L}\p{N}]+/u)).filter((word) => word.length >= 4);
   const rest = known.reduce((text, word) => text.replaceAll(word, ''), lower).replace(/[^\p{L}]/gu, '');
-  if (rest.length < 4 && known.some((word) => lower.includes(word))) return 'it is little more than your name or address; choose a few words that do not belong together';
+  if (rest.length < 4 && known.some((word) => lower.includes(word)))
+    return 'it is little more than your name or address; choose a few words that do not belong together';
   return null;
 }
 
@@ -47,7 +49,13 @@ function onceOf(text: string): string {
   return period > 0 && period < text.length && text.length % period === 0 ? text.slice(0, period) : text;
 }
 
-const rows = ['abcdefghijklmnopqrstuvwxyz', '01234567890123456789', 'qwertyuiopasdfghjklzxcvbnm', 'qwertzuiopasdfghjklyxcvbnm', 'azertyuiopqsdfghjklmwxcvbn'];
+const rows = [
+  'abcdefghijklmnopqrstuvwxyz',
+  '01234567890123456789',
+  'qwertyuiopasdfghjklzxcvbnm',
+  'qwertzuiopasdfghjklyxcvbnm',
+  'azertyuiopqsdfghjklmwxcvbn',
+];
 
 /** Whether the text is made of at most three runs along a row, forward or backward. */
 function isSequence(text: string): boolean {

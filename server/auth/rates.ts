@@ -23,7 +23,10 @@ interface Use {
 }
 
 /** Counts a try under each rule; the longest wait where one of them says no. Subjects are kept as hashes only. */
-export async function countTry({ db, clock, sha256 }: Pick<AuthParts, 'db' | 'clock' | 'sha256'>, uses: readonly Use[]): Promise<Wait | null> {
+export async function countTry(
+  { db, clock, sha256 }: Pick<AuthParts, 'db' | 'clock' | 'sha256'>,
+  uses: readonly Use[],
+): Promise<Wait | null> {
   const waits: number[] = [];
   for (const { rule, subject } of uses) {
     const seconds = await countUse(db, rule, { subject: sha256(subject), nowUtcMs: clock.utcMs() });

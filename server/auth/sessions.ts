@@ -41,14 +41,24 @@ export interface SessionParts {
  */
 export function createSessions(parts: SessionParts): SessionPort {
   const { db, clock, newToken, sha256 } = parts;
-  const lucia = new Lucia(endless(sessionAdapter(db)), { sessionExpiresIn: new TimeSpan(1, 'd'), getSessionAttributes: (attributes: Attributes) => attributes });
+  const lucia = new Lucia(endless(sessionAdapter(db)), {
+    sessionExpiresIn: new TimeSpan(1, 'd'),
+    getSessionAttributes: (attributes: Attributes) => attributes,
+  });
   return {
     create: async (userId, device) => {
       const token = newToken();
       const limits = limitsFor(await rolesOf(db, userId));
       const nowMs = clock.utcMs();
       const endsAt = nowMs + limits.absoluteMs;
-      const facts = { createdAt: nowMs, authAt: nowMs, endsAt, idleEndsAt: nowMs + limits.idleMs, userAgent: device.userAgent.slice(0, 300), ip: device.ip };
+      const facts = {
+        createdAt: nowMs,
+        authAt: nowMs,
+        endsAt,
+        idleEndsAt: nowMs + limits.idleMs,
+        userAgent: device.userAgent.slice(0, 300),
+        ip: device.ip,
+      };
       await lucia.createSession(userId, facts, { sessionId: sha256(token) });
       return { token, expiresAt: new Date(endsAt) };
     },
@@ -72,14 +82,24 @@ async function withinLimits({ db, clock }: SessionParts, session: Attributes & {
   const renew = remainingMs < limits.idleMs / 2 || remainingMs > limits.idleMs;
   const idleEndsAt = Math.min(renew ? nowMs + limits.idleMs : session.idleEndsAt, endsAt);
   if (renew) await sessionAdapter(db).updateSessionExpiration(session.id, new Date(idleEndsAt));
-  return { id: session.id, userId: session.userId, createdAt: new Date(session.createdAt), authAt: new Date(session.authAt), expiresAt: new Date(idleEndsAt) };
+  return {
+    id: session.id,
+    userId: session.userId,
+    createdAt: new Date(session.createdAt),
+    authAt: new Date(session.authAt),
+    expiresAt: new Date(idleEndsAt),
+  };
 }
 
 const never = new Date(Date.UTC(9999, 0, 1));
 
 /** The adapter with the idle limit carried among the attributes, out of Lucia's own reckoning. */
 function endless(adapter: Adapter): Adapter {
-  const shown = (session: DatabaseSession): DatabaseSession => ({ ...session, expiresAt: never, attributes: { ...session.attributes, idleEndsAt: session.expiresAt.getTime() } });
+  const shown = (session: DatabaseSession): DatabaseSession => ({
+    ...session,
+    expiresAt: never,
+    attributes: { ...session.attributes, idleEndsAt: session.expiresAt.getTime() },
+  });
   return {
     getSessionAndUser: async (sessionId) => {
       const [session, user] = await adapter.getSessionAndUser(sessionId);

@@ -3,7 +3,15 @@ import type { JobHandlers } from '../interfaces/jobs';
 import type { MailPort } from '../interfaces/mail';
 import type { Database } from '../store/database';
 import { openInvitationById, setInvitationToken } from '../store/invitations';
-import { changedMailSchema, invitationMailSchema, mailKinds, resetMailSchema, type ChangedMail, type InvitationMail, type ResetMail } from '../store/mail-requests';
+import {
+  changedMailSchema,
+  invitationMailSchema,
+  mailKinds,
+  resetMailSchema,
+  type ChangedMail,
+  type InvitationMail,
+  type ResetMail,
+} from '../store/mail-requests';
 import { createPasswordReset } from '../store/password-resets';
 import { userByEmail, userById } from '../store/people';
 import { invitationMail, passwordChangedMail, passwordResetMail } from './mails';
@@ -30,13 +38,18 @@ export function mailJobs(parts: MailJobParts): JobHandlers {
   };
 }
 
-async function sendInvitation({ db, clock, mail, newToken, sha256 }: MailJobParts, { labId, invitationId, origin }: InvitationMail): Promise<void> {
+async function sendInvitation(
+  { db, clock, mail, newToken, sha256 }: MailJobParts,
+  { labId, invitationId, origin }: InvitationMail,
+): Promise<void> {
   const invitation = await openInvitationById(db, { labId, id: invitationId, nowUtcMs: clock.utcMs() });
   if (invitation === null) return;
   const token = newToken();
   await setInvitationToken(db, { labId, id: invitationId, tokenHash: sha256(token) });
   const { email, labName, timeZone, role, invitedBy, expiresAt } = invitation;
-  await mail.send(invitationMail({ to: email, labName, timeZone, role, invitedBy, expiresAtUtcMs: expiresAt, link: `${origin}/invitations/${token}` }));
+  await mail.send(
+    invitationMail({ to: email, labName, timeZone, role, invitedBy, expiresAtUtcMs: expiresAt, link: `${origin}/invitations/${token}` }),
+  );
 }
 
 async function sendPasswordReset({ db, clock, mail, newToken, sha256 }: MailJobParts, { email, origin }: ResetMail): Promise<void> {
@@ -44,12 +57,23 @@ async function sendPasswordReset({ db, clock, mail, newToken, sha256 }: MailJobP
   if (user === null) return;
   const token = newToken();
   const nowUtcMs = clock.utcMs();
-  await db.transaction((tx) => createPasswordReset(tx, { userId: user.id, tokenHash: sha256(token), nowUtcMs, expiresAtUtcMs: nowUtcMs + resetValidMinutes * 60_000 }));
-  await mail.send(passwordResetMail({ to: user.email, name: user.name, link: `${origin}/reset-password?token=${token}`, validMinutes: resetValidMinutes }));
+  await db.transaction((tx) =>
+    createPasswordReset(tx, { userId: user.id, tokenHash: sha256(token), nowUtcMs, expiresAtUtcMs: nowUtcMs + resetValidMinutes * 60_000 }),
+  );
+  await mail.send(
+    passwordResetMail({
+      to: user.email,
+      name: user.name,
+      link: `${origin}/reset-password?token=${token}`,
+      validMinutes: resetValidMinutes,
+    }),
+  );
 }
 
 async function sendPasswordChanged({ db, mail }: MailJobParts, { userId, atUtcMs }: ChangedMail): Promise<void> {
   const user = await userById(db, userId);
   if (user === null) return;
-  await mail.send(passwordChangedMail({ to: user.email, name: user.name, at: `${new Date(atUtcMs).toISOString().slice(0, 16).replace('T', ' ')} UTC` }));
+  await mail.send(
+    passwordChangedMail({ to: user.email, name: user.name, at: `${new Date(atUtcMs).toISOString().slice(0, 16).replace('T', ' ')} UTC` }),
+  );
 }

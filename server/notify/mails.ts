@@ -15,7 +15,15 @@ const may: Record<Role, string> = {
 const oneLine = (text: string) => text.replace(/\s+/g, ' ').trim();
 const anybody = 'As every member you may hold or stop a run at any time.';
 
-export function invitationMail(invitation: { to: string; labName: string; timeZone: string; role: Role; invitedBy: string; link: string; expiresAtUtcMs: number }): Mail {
+export function invitationMail(invitation: {
+  to: string;
+  labName: string;
+  timeZone: string;
+  role: Role;
+  invitedBy: string;
+  link: string;
+  expiresAtUtcMs: number;
+}): Mail {
   const lab = oneLine(invitation.labName);
   return {
     to: invitation.to,

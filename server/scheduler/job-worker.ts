@@ -68,7 +68,9 @@ async function workOnce({ queue, clock, handlers, onProblem }: JobWorkerParts): 
     onProblem({ job, error });
     if (job === null) return false;
     const failed = job;
-    await queue.fail(failed, error instanceof Error ? error.message : String(error)).catch((failure: unknown) => onProblem({ job: failed, error: failure }));
+    await queue
+      .fail(failed, error instanceof Error ? error.message : String(error))
+      .catch((failure: unknown) => onProblem({ job: failed, error: failure }));
     return true;
   }
 }

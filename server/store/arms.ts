@@ -16,17 +16,31 @@ export async function armRig(
 ): Promise<Arm> {
   const { nowUtcMs, untilUtcMs, ...fields } = arm;
   await tx.update(arms).set({ endedAt: nowUtcMs, endedWhy: 'armed anew' }).where(unended(arm.labId, arm.rigId));
-  return one(await tx.insert(arms).values({ ...fields, fromAt: nowUtcMs, untilAt: untilUtcMs }).returning());
+  return one(
+    await tx
+      .insert(arms)
+      .values({ ...fields, fromAt: nowUtcMs, untilAt: untilUtcMs })
+      .returning(),
+  );
 }
 
 /** The arm that holds at `nowUtcMs`, or null. */
 export async function currentArm(db: Handle, where: { labId: string; rigId: string; nowUtcMs: number }): Promise<Arm | null> {
-  const rows = await db.select().from(arms).where(and(unended(where.labId, where.rigId), gt(arms.untilAt, where.nowUtcMs))).orderBy(desc(arms.fromAt)).limit(1);
+  const rows = await db
+    .select()
+    .from(arms)
+    .where(and(unended(where.labId, where.rigId), gt(arms.untilAt, where.nowUtcMs)))
+    .orderBy(desc(arms.fromAt))
+    .limit(1);
   return rows[0] ?? null;
 }
 
 /** Ends the arm that stands, saying why; null when none did. */
 export async function endArm(db: Handle, where: { labId: string; rigId: string; nowUtcMs: number; why: string }): Promise<Arm | null> {
-  const rows = await db.update(arms).set({ endedAt: where.nowUtcMs, endedWhy: where.why }).where(and(unended(where.labId, where.rigId), gt(arms.untilAt, where.nowUtcMs))).returning();
+  const rows = await db
+    .update(arms)
+    .set({ endedAt: where.nowUtcMs, endedWhy: where.why })
+    .where(and(unended(where.labId, where.rigId), gt(arms.untilAt, where.nowUtcMs)))
+    .returning();
   return rows[0] ?? null;
 }

@@ -29,10 +29,17 @@ export type AuditRow = typeof audit.$inferSelect;
 export async function appendAudit(tx: Transaction, fact: AuditFact, sha256: Sha256): Promise<void> {
   const { labId } = fact;
   await tx.execute(sql`select pg_advisory_xact_lock(hashtextextended(${`audit ${labId}`}, 0))`);
-  const [last] = await tx.select({ seq: audit.seq, hash: audit.hash }).from(audit).where(eq(audit.labId, labId)).orderBy(desc(audit.seq)).limit(1);
+  const [last] = await tx
+    .select({ seq: audit.seq, hash: audit.hash })
+    .from(audit)
+    .where(eq(audit.labId, labId))
+    .orderBy(desc(audit.seq))
+    .limit(1);
   // Through JSON once, so that what is hashed is what the column gives back.
   const data = JSON.parse(JSON.stringify({ ...fact.data, who: fact.who })) as Record<string, unknown>;
-  await tx.insert(audit).values({ labId, ...appendEvent(last ?? emptyChain, { at: new Date(fact.utcMs).toISOString(), kind: fact.kind, data }, sha256) });
+  await tx
+    .insert(audit)
+    .values({ labId, ...appendEvent(last ?? emptyChain, { at: new Date(fact.utcMs).toISOString(), kind: fact.kind, data }, sha256) });
 }
 
 /** Entries of a lab, newest first, from before `beforeSeq` on. */

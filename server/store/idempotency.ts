@@ -14,25 +14,41 @@ export function createIdempotency(db: Database, nowUtcMs: () => number): Idempot
   return {
     begin: (claim) => begin(db, claim, nowUtcMs()),
     finish: async (claim, answer) => {
-      await db.update(idempotencyKeys).set({ status: answer.status, body: answer.body, etag: answer.etag }).where(and(own(claim), eq(idempotencyKeys.fingerprint, claim.fingerprint)));
+      await db
+        .update(idempotencyKeys)
+        .set({ status: answer.status, body: answer.body, etag: answer.etag })
+        .where(and(own(claim), eq(idempotencyKeys.fingerprint, claim.fingerprint)));
     },
     release: async (claim) => {
-      await db.delete(idempotencyKeys).where(and(own(claim), eq(idempotencyKeys.fingerprint, claim.fingerprint), isNull(idempotencyKeys.status)));
+      await db
+        .delete(idempotencyKeys)
+        .where(and(own(claim), eq(idempotencyKeys.fingerprint, claim.fingerprint), isNull(idempotencyKeys.status)));
     },
   };
 }
 
 async function begin(db: Database, claim: IdempotencyClaim, nowUtcMs: number): Promise<IdempotencyState> {
   const fresh = { ...claim, status: null, body: null, etag: null, claimedAt: nowUtcMs, expiresAt: nowUtcMs + keptMs };
-  const staleClaim = and(isNull(idempotencyKeys.status), lte(idempotencyKeys.claimedAt, nowUtcMs - claimMs), eq(idempotencyKeys.fingerprint, claim.fingerprint));
+  const staleClaim = and(
+    isNull(idempotencyKeys.status),
+    lte(idempotencyKeys.claimedAt, nowUtcMs - claimMs),
+    eq(idempotencyKeys.fingerprint, claim.fingerprint),
+  );
   // One statement claims a free, an expired or an abandoned key; of two that race only one gets a row back.
   const claimed = await db
     .insert(idempotencyKeys)
     .values(fresh)
-    .onConflictDoUpdate({ target: [idempotencyKeys.userId, idempotencyKeys.key], set: fresh, setWhere: or(lte(idempotencyKeys.expiresAt, nowUtcMs), staleClaim) ?? sql`false` })
+    .onConflictDoUpdate({
+      target: [idempotencyKeys.userId, idempotencyKeys.key],
+      set: fresh,
+      setWhere: or(lte(idempotencyKeys.expiresAt, nowUtcMs), staleClaim) ?? sql`false`,
+    })
     .returning({ key: idempotencyKeys.key });
   if (claimed.length === 1) return { kind: 'new' };
-  const [row] = await db.select().from(idempotencyKeys).where(and(eq(idempotencyKeys.userId, claim.userId), eq(idempotencyKeys.key, claim.key)));
+  const [row] = await db
+    .select()
+    .from(idempotencyKeys)
+    .where(and(eq(idempotencyKeys.userId, claim.userId), eq(idempotencyKeys.key, claim.key)));
   // Released between the two statements: the first request is over and left no answer, so the caller may ask again.
   if (row === undefined) return { kind: 'running' };
   if (row.fingerprint !== claim.fingerprint) return { kind: 'other-request' };

@@ -14,7 +14,12 @@ export async function enqueueJob(
   job: { kind: string; payload: unknown; labId: string | null; nowUtcMs: number; dueAtUtcMs?: number; maxAttempts?: number },
 ): Promise<{ id: string }> {
   const { nowUtcMs, dueAtUtcMs = nowUtcMs, maxAttempts = 8, ...fields } = job;
-  const row = one(await db.insert(jobs).values({ ...fields, maxAttempts, dueAt: dueAtUtcMs, createdAt: nowUtcMs }).returning({ id: jobs.id }));
+  const row = one(
+    await db
+      .insert(jobs)
+      .values({ ...fields, maxAttempts, dueAt: dueAtUtcMs, createdAt: nowUtcMs })
+      .returning({ id: jobs.id }),
+  );
   return row;
 }
 
@@ -29,7 +34,10 @@ export function createJobQueue(db: Database, holder: string, nowUtcMs: () => num
   return {
     take: (kinds) => take(db, { kinds, holder, nowUtcMs: nowUtcMs() }),
     renew: async (job) => {
-      const renewed = await db.update(jobs).set({ leaseUntil: nowUtcMs() + leaseMs }).where(held(job));
+      const renewed = await db
+        .update(jobs)
+        .set({ leaseUntil: nowUtcMs() + leaseMs })
+        .where(held(job));
       return renewed.rowCount === 1;
     },
     finish: async (job) => {
@@ -38,8 +46,13 @@ export function createJobQueue(db: Database, holder: string, nowUtcMs: () => num
     fail: async (job, why) => {
       const last = job.attempt >= job.maxAttempts;
       const retryMs = Math.min(longestRetryMs, firstRetryMs * 2 ** (job.attempt - 1));
-      const next = last ? { state: 'given-up' as const, finishedAt: nowUtcMs() } : { state: 'waiting' as const, dueAt: nowUtcMs() + retryMs };
-      await db.update(jobs).set({ ...next, leaseUntil: null, lastError: why.slice(0, 2000) }).where(held(job));
+      const next = last
+        ? { state: 'given-up' as const, finishedAt: nowUtcMs() }
+        : { state: 'waiting' as const, dueAt: nowUtcMs() + retryMs };
+      await db
+        .update(jobs)
+        .set({ ...next, leaseUntil: null, lastError: why.slice(0, 2000) })
+        .where(held(job));
     },
   };
 }
@@ -48,7 +61,10 @@ async function take(db: Database, want: { kinds: readonly string[]; holder: stri
   const now = sql`${timestampOfUtcMs(want.nowUtcMs)}::timestamptz`;
   const lapsed = sql`(${jobs.state} = 'running' and ${jobs.leaseUntil} <= ${now})`;
   // A job that brings its worker down each time must not do so for ever.
-  await db.update(jobs).set({ state: 'given-up', finishedAt: want.nowUtcMs, leaseUntil: null, lastError: 'the worker died during the last attempt' }).where(sql`${lapsed} and ${jobs.attempts} >= ${jobs.maxAttempts}`);
+  await db
+    .update(jobs)
+    .set({ state: 'given-up', finishedAt: want.nowUtcMs, leaseUntil: null, lastError: 'the worker died during the last attempt' })
+    .where(sql`${lapsed} and ${jobs.attempts} >= ${jobs.maxAttempts}`);
   const next = db
     .select({ id: jobs.id })
     .from(jobs)
@@ -61,5 +77,7 @@ async function take(db: Database, want: { kinds: readonly string[]; holder: stri
     .set({ state: 'running', attempts: sql`${jobs.attempts} + 1`, holder: want.holder, leaseUntil: want.nowUtcMs + leaseMs })
     .where(eq(jobs.id, sql`(${next})`))
     .returning();
-  return row === undefined ? null : { id: row.id, labId: row.labId, kind: row.kind, payload: row.payload, attempt: row.attempts, maxAttempts: row.maxAttempts };
+  return row === undefined
+    ? null
+    : { id: row.id, labId: row.labId, kind: row.kind, payload: row.payload, attempt: row.attempts, maxAttempts: row.maxAttempts };
 }

@@ -3,7 +3,11 @@ import type { Handle } from './database';
 import { enqueueJob } from './jobs';
 
 /** Mails asked for in the transaction of their cause; `server/notify` sends them afterwards, with retries. */
-export const mailKinds = { invitation: 'mail.invitation', passwordReset: 'mail.password-reset', passwordChanged: 'mail.password-changed' } as const;
+export const mailKinds = {
+  invitation: 'mail.invitation',
+  passwordReset: 'mail.password-reset',
+  passwordChanged: 'mail.password-changed',
+} as const;
 
 /** Address of the server as people reach it, without a slash at the end. */
 const origin = z.string();

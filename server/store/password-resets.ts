@@ -3,9 +3,15 @@ import { passwordResets } from '@/db/schema';
 import type { Handle } from './database';
 
 /** Keeps the hash of a reset token; earlier tokens of the account that are still open lose their use. */
-export async function createPasswordReset(db: Handle, reset: { userId: string; tokenHash: string; nowUtcMs: number; expiresAtUtcMs: number }): Promise<void> {
+export async function createPasswordReset(
+  db: Handle,
+  reset: { userId: string; tokenHash: string; nowUtcMs: number; expiresAtUtcMs: number },
+): Promise<void> {
   const { userId, tokenHash, nowUtcMs, expiresAtUtcMs } = reset;
-  await db.update(passwordResets).set({ usedAt: nowUtcMs }).where(and(eq(passwordResets.userId, userId), isNull(passwordResets.usedAt)));
+  await db
+    .update(passwordResets)
+    .set({ usedAt: nowUtcMs })
+    .where(and(eq(passwordResets.userId, userId), isNull(passwordResets.usedAt)));
   await db.insert(passwordResets).values({ userId, tokenHash, createdAt: nowUtcMs, expiresAt: expiresAtUtcMs });
 }
 

@@ -14,12 +14,19 @@ export async function createUser(
   account: { name: string; email: string; passwordHash: string; demo?: boolean; nowUtcMs: number },
 ): Promise<User | null> {
   const { nowUtcMs, ...fields } = account;
-  const rows = await db.insert(users).values({ ...fields, email: normalEmail(fields.email), createdAt: nowUtcMs }).onConflictDoNothing({ target: users.email }).returning();
+  const rows = await db
+    .insert(users)
+    .values({ ...fields, email: normalEmail(fields.email), createdAt: nowUtcMs })
+    .onConflictDoNothing({ target: users.email })
+    .returning();
   return rows[0] ?? null;
 }
 
 export async function userByEmail(db: Handle, email: string): Promise<User | null> {
-  const rows = await db.select().from(users).where(eq(users.email, normalEmail(email)));
+  const rows = await db
+    .select()
+    .from(users)
+    .where(eq(users.email, normalEmail(email)));
   return rows[0] ?? null;
 }
 
@@ -36,11 +43,20 @@ const membershipColumns = { labId: labs.id, labName: labs.name, timeZone: labs.t
 
 /** Labs of an account in alphabetical order. */
 export function membershipsOf(db: Handle, userId: string) {
-  return db.select(membershipColumns).from(memberships).innerJoin(labs, eq(labs.id, memberships.labId)).where(eq(memberships.userId, userId)).orderBy(asc(labs.name), asc(labs.id));
+  return db
+    .select(membershipColumns)
+    .from(memberships)
+    .innerJoin(labs, eq(labs.id, memberships.labId))
+    .where(eq(memberships.userId, userId))
+    .orderBy(asc(labs.name), asc(labs.id));
 }
 
 export async function membershipIn(db: Handle, userId: string, labId: string) {
-  const rows = await db.select(membershipColumns).from(memberships).innerJoin(labs, eq(labs.id, memberships.labId)).where(and(eq(memberships.userId, userId), eq(memberships.labId, labId)));
+  const rows = await db
+    .select(membershipColumns)
+    .from(memberships)
+    .innerJoin(labs, eq(labs.id, memberships.labId))
+    .where(and(eq(memberships.userId, userId), eq(memberships.labId, labId)));
   return rows[0] ?? null;
 }
 
@@ -57,18 +73,31 @@ const memberColumns = { userId: users.id, name: users.name, email: users.email, 
 
 /** Members of a lab, the longest first. */
 export function membersOf(db: Handle, labId: string): Promise<Member[]> {
-  return db.select(memberColumns).from(memberships).innerJoin(users, eq(users.id, memberships.userId)).where(eq(memberships.labId, labId)).orderBy(asc(memberships.since), asc(users.name));
+  return db
+    .select(memberColumns)
+    .from(memberships)
+    .innerJoin(users, eq(users.id, memberships.userId))
+    .where(eq(memberships.labId, labId))
+    .orderBy(asc(memberships.since), asc(users.name));
 }
 
 export async function memberOf(db: Handle, labId: string, userId: string): Promise<Member | null> {
-  const rows = await db.select(memberColumns).from(memberships).innerJoin(users, eq(users.id, memberships.userId)).where(and(eq(memberships.labId, labId), eq(memberships.userId, userId)));
+  const rows = await db
+    .select(memberColumns)
+    .from(memberships)
+    .innerJoin(users, eq(users.id, memberships.userId))
+    .where(and(eq(memberships.labId, labId), eq(memberships.userId, userId)));
   return rows[0] ?? null;
 }
 
 /** False when the account is a member already. */
 export async function addMember(db: Handle, member: { labId: string; userId: string; role: Role; nowUtcMs: number }): Promise<boolean> {
   const { nowUtcMs, ...fields } = member;
-  const rows = await db.insert(memberships).values({ ...fields, since: nowUtcMs }).onConflictDoNothing().returning({ role: memberships.role });
+  const rows = await db
+    .insert(memberships)
+    .values({ ...fields, since: nowUtcMs })
+    .onConflictDoNothing()
+    .returning({ role: memberships.role });
   return rows.length === 1;
 }
 
@@ -84,7 +113,12 @@ export async function changeMember(tx: Transaction, change: { labId: string; use
   const member = await memberOf(tx, labId, userId);
   if (member === null) return 'unknown';
   if (member.role === 'owner' && role !== 'owner') {
-    const { owners } = one(await tx.select({ owners: count() }).from(memberships).where(and(eq(memberships.labId, labId), eq(memberships.role, 'owner'))));
+    const { owners } = one(
+      await tx
+        .select({ owners: count() })
+        .from(memberships)
+        .where(and(eq(memberships.labId, labId), eq(memberships.role, 'owner'))),
+    );
     if (owners < 2) return 'last-owner';
   }
   const own = and(eq(memberships.labId, labId), eq(memberships.userId, userId));
@@ -99,13 +133,26 @@ export function accessSource(db: Database, nowUtcMs: () => number) {
     user: (userId: string) => userById(db, userId),
     membership: (userId: string, labId: string) => membershipIn(db, userId, labId),
     ofLabs: async (labIds: readonly string[]) => {
-      const found = await db.select({ ...membershipColumns, userId: memberships.userId }).from(memberships).innerJoin(labs, eq(labs.id, memberships.labId)).where(inArray(memberships.labId, [...labIds]));
+      const found = await db
+        .select({ ...membershipColumns, userId: memberships.userId })
+        .from(memberships)
+        .innerJoin(labs, eq(labs.id, memberships.labId))
+        .where(inArray(memberships.labId, [...labIds]));
       const userIds = [...new Set(found.map((row) => row.userId))];
-      const living = await db.select().from(sessions).where(and(inArray(sessions.userId, userIds), gt(sessions.endsAt, nowUtcMs())));
+      const living = await db
+        .select()
+        .from(sessions)
+        .where(and(inArray(sessions.userId, userIds), gt(sessions.endsAt, nowUtcMs())));
       return {
         memberships: found,
         users: await db.select({ id: users.id, name: users.name, email: users.email }).from(users).where(inArray(users.id, userIds)),
-        sessions: living.map((row) => ({ id: row.id, userId: row.userId, createdAt: new Date(row.createdAt), authAt: new Date(row.authAt), expiresAt: row.expiresAt })),
+        sessions: living.map((row) => ({
+          id: row.id,
+          userId: row.userId,
+          createdAt: new Date(row.createdAt),
+          authAt: new Date(row.authAt),
+          expiresAt: row.expiresAt,
+        })),
       };
     },
   };

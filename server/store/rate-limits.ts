@@ -41,7 +41,10 @@ export async function forgetUses(db: Handle, rule: RateRule, subject: string): P
 
 /** Takes one use back, after a try that succeeded where only failures shall count. */
 export async function giveBackUse(db: Handle, rule: RateRule, subject: string): Promise<void> {
-  await db.update(rateLimits).set({ count: sql`greatest(0, ${rateLimits.count} - 1)` }).where(eq(rateLimits.bucket, `${rule.name} ${subject}`));
+  await db
+    .update(rateLimits)
+    .set({ count: sql`greatest(0, ${rateLimits.count} - 1)` })
+    .where(eq(rateLimits.bucket, `${rule.name} ${subject}`));
 }
 
 /** Removes counters whose window is over; returns how many. */

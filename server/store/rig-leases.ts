@@ -7,7 +7,10 @@ import type { Handle } from './database';
  * the controller as a fence; the same holder keeps its epoch.
  * @returns the epoch, or null while somebody else's lease runs
  */
-export async function takeRigLease(db: Handle, lease: { labId: string; rigId: string; holder: string; nowUtcMs: number; untilUtcMs: number }): Promise<number | null> {
+export async function takeRigLease(
+  db: Handle,
+  lease: { labId: string; rigId: string; holder: string; nowUtcMs: number; untilUtcMs: number },
+): Promise<number | null> {
   const { labId, rigId, holder, nowUtcMs, untilUtcMs } = lease;
   const mine = eq(rigLeases.holder, holder);
   const rows = await db
@@ -24,5 +27,8 @@ export async function takeRigLease(db: Handle, lease: { labId: string; rigId: st
 
 /** Lets a lease go at once, so that another process need not wait for its end. */
 export async function giveRigLease(db: Handle, lease: { labId: string; rigId: string; holder: string; nowUtcMs: number }): Promise<void> {
-  await db.update(rigLeases).set({ untilAt: lease.nowUtcMs }).where(and(eq(rigLeases.labId, lease.labId), eq(rigLeases.rigId, lease.rigId), eq(rigLeases.holder, lease.holder)));
+  await db
+    .update(rigLeases)
+    .set({ untilAt: lease.nowUtcMs })
+    .where(and(eq(rigLeases.labId, lease.labId), eq(rigLeases.rigId, lease.rigId), eq(rigLeases.holder, lease.holder)));
 }

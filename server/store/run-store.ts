@@ -28,9 +28,22 @@ export async function insertRun(db: Handle, run: NewRun): Promise<boolean> {
   const rows = await db
     .insert(runs)
     .values({
-      labId: start.labId, id: start.runId, rigId: start.rigId, rigRevision: start.rigRevision, protocolId: run.protocolId, massSetId: run.massSetId,
-      rehearsal: start.simulated !== null, start, state: run.state, createdAt: run.nowUtcMs, predictedEndAt: run.predictedEndUtcMs,
-      rigName: start.rigName, protocolName: start.protocolName, protocolRevision: start.protocolRevision, massSetLabel: start.massSetLabel, operator: start.operator,
+      labId: start.labId,
+      id: start.runId,
+      rigId: start.rigId,
+      rigRevision: start.rigRevision,
+      protocolId: run.protocolId,
+      massSetId: run.massSetId,
+      rehearsal: start.simulated !== null,
+      start,
+      state: run.state,
+      createdAt: run.nowUtcMs,
+      predictedEndAt: run.predictedEndUtcMs,
+      rigName: start.rigName,
+      protocolName: start.protocolName,
+      protocolRevision: start.protocolRevision,
+      massSetLabel: start.massSetLabel,
+      operator: start.operator,
     })
     .onConflictDoNothing({ target: [runs.labId, runs.rigId], where: oneRunPerRig })
     .returning({ id: runs.id });
@@ -44,21 +57,37 @@ const oneRunPerRig = sql`not rehearsal and state not in ('finished', 'stopped', 
 export function createRunStore(db: Database): RunStore {
   return {
     load: async (labId, runId) => {
-      const [row] = await db.select(storedColumns).from(runs).where(and(eq(runs.labId, labId), eq(runs.id, runId)));
+      const [row] = await db
+        .select(storedColumns)
+        .from(runs)
+        .where(and(eq(runs.labId, labId), eq(runs.id, runId)));
       return row === undefined ? null : storedRunOf(row);
     },
     unfinished: async () => {
-      const rows = await db.select(storedColumns).from(runs).where(and(eq(runs.rehearsal, false), notInArray(runs.state, endedStates))).orderBy(asc(runs.createdAt));
+      const rows = await db
+        .select(storedColumns)
+        .from(runs)
+        .where(and(eq(runs.rehearsal, false), notInArray(runs.state, endedStates)))
+        .orderBy(asc(runs.createdAt));
       return rows.map(storedRunOf);
     },
     commit: (write) => db.transaction((tx) => commit(tx, write)),
   };
 }
 
-const storedColumns = { start: runs.start, snapshot: runs.snapshot, chartVersion: runs.chartVersion, lastSeq: runs.lastSeq, lastHash: runs.lastHash };
+const storedColumns = {
+  start: runs.start,
+  snapshot: runs.snapshot,
+  chartVersion: runs.chartVersion,
+  lastSeq: runs.lastSeq,
+  lastHash: runs.lastHash,
+};
 
 const storedRunOf = (row: { start: RunStart; snapshot: unknown; chartVersion: number; lastSeq: number; lastHash: string }): StoredRun => ({
-  start: row.start, snapshot: row.snapshot, chartVersion: row.chartVersion, chain: { seq: row.lastSeq, hash: row.lastHash },
+  start: row.start,
+  snapshot: row.snapshot,
+  chartVersion: row.chartVersion,
+  chain: { seq: row.lastSeq, hash: row.lastHash },
 });
 
 async function commit(tx: Transaction, write: RunWrite): Promise<void> {
@@ -66,7 +95,9 @@ async function commit(tx: Transaction, write: RunWrite): Promise<void> {
   const [row] = await tx.select({ lastSeq: runs.lastSeq, lastHash: runs.lastHash }).from(runs).where(own).for('update');
   if (row === undefined) throw new Error(`run ${write.runId} is not in the database: insert it before the first commit`);
   if (row.lastSeq !== write.expectedSeq) {
-    throw new StaleRunError(`the chain of run ${write.runId} ends at ${row.lastSeq}, the writer believes ${write.expectedSeq}: somebody else drives this run`);
+    throw new StaleRunError(
+      `the chain of run ${write.runId} ends at ${row.lastSeq}, the writer believes ${write.expectedSeq}: somebody else drives this run`,
+    );
   }
   const end = followChain({ seq: row.lastSeq, hash: row.lastHash }, write.events);
   await insertEvents(tx, write);
@@ -75,8 +106,15 @@ async function commit(tx: Transaction, write: RunWrite): Promise<void> {
   await tx
     .update(runs)
     .set({
-      snapshot: write.snapshot, chartVersion: write.chartVersion, lastSeq: end.seq, lastHash: end.hash, state: summary.state as RunState, outcome: summary.outcome,
-      startedAt: summary.startedAtUtcMs, endedAt: summary.endedAtUtcMs, predictedEndAt: summary.predictedEndUtcMs,
+      snapshot: write.snapshot,
+      chartVersion: write.chartVersion,
+      lastSeq: end.seq,
+      lastHash: end.hash,
+      state: summary.state as RunState,
+      outcome: summary.outcome,
+      startedAt: summary.startedAtUtcMs,
+      endedAt: summary.endedAtUtcMs,
+      predictedEndAt: summary.predictedEndUtcMs,
     })
     .where(own);
 }
@@ -85,7 +123,8 @@ async function commit(tx: Transaction, write: RunWrite): Promise<void> {
 function followChain(from: ChainHead, events: readonly ChainedEvent[]): ChainHead {
   let end = from;
   for (const event of events) {
-    if (event.seq !== end.seq + 1 || event.prev !== end.hash) throw new Error(`event ${event.seq} does not continue the chain, which ends at ${end.seq}`);
+    if (event.seq !== end.seq + 1 || event.prev !== end.hash)
+      throw new Error(`event ${event.seq} does not continue the chain, which ends at ${end.seq}`);
     end = { seq: event.seq, hash: event.hash };
   }
   return end;
@@ -109,8 +148,22 @@ async function putSteps(tx: Transaction, write: RunWrite): Promise<void> {
 
 const excluded = (column: string) => sql.raw(`excluded.${column}`);
 const stepColumns = {
-  path: 'path', kind: 'kind', label: 'label', station: 'station', plannedStartUtcMs: 'planned_start', plannedEndUtcMs: 'planned_end', startUtcMs: 'started_at', endUtcMs: 'ended_at',
-  uStartS: 'u_start_s', uEndS: 'u_end_s', angleStartDeg: 'angle_start_deg', angleEndDeg: 'angle_end_deg', outcome: 'outcome', angleSource: 'angle_source', uAngleDeg: 'u_angle_deg', good: 'good',
+  path: 'path',
+  kind: 'kind',
+  label: 'label',
+  station: 'station',
+  plannedStartUtcMs: 'planned_start',
+  plannedEndUtcMs: 'planned_end',
+  startUtcMs: 'started_at',
+  endUtcMs: 'ended_at',
+  uStartS: 'u_start_s',
+  uEndS: 'u_end_s',
+  angleStartDeg: 'angle_start_deg',
+  angleEndDeg: 'angle_end_deg',
+  outcome: 'outcome',
+  angleSource: 'angle_source',
+  uAngleDeg: 'u_angle_deg',
+  good: 'good',
 } satisfies Record<Exclude<keyof StepRow, 'seq'>, string>;
 const replacedByNew = Object.fromEntries(Object.entries(stepColumns).map(([field, column]) => [field, excluded(column)]));
 

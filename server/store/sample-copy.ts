@@ -60,7 +60,8 @@ export async function decodeSamples(stream: AsyncIterable<Buffer>): Promise<Samp
       inHeader = false;
       at = headerBytes;
     }
-    for (; at + rowBytes <= data.length; at += rowBytes) push(growing, (readInt64(data, at + 6) + postgresEpochUs) / 1000, data.readDoubleBE(at + 18));
+    for (; at + rowBytes <= data.length; at += rowBytes)
+      push(growing, (readInt64(data, at + 6) + postgresEpochUs) / 1000, data.readDoubleBE(at + 18));
     rest = data.subarray(at);
   }
   return { utcMs: growing.utcMs.slice(0, growing.count), value: growing.value.slice(0, growing.count) };

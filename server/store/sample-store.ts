@@ -32,7 +32,11 @@ interface ChannelKey {
  * Appends within the transaction of `client`, all or none.
  * @throws UnusableBatchError for a channel that is not of this lab, unequal lengths, or a number that is not finite
  */
-export async function appendSamples(client: PoolClient, channel: ChannelKey, batch: SampleBatch): Promise<{ stored: number; known: number }> {
+export async function appendSamples(
+  client: PoolClient,
+  channel: ChannelKey,
+  batch: SampleBatch,
+): Promise<{ stored: number; known: number }> {
   assertUsable(batch);
   await assertChannel(client, channel);
   const count = batch.utcMs.length;
@@ -42,14 +46,21 @@ export async function appendSamples(client: PoolClient, channel: ChannelKey, bat
 }
 
 function assertUsable({ utcMs, value }: SampleBatch): void {
-  if (utcMs.length !== value.length) throw new UnusableBatchError(`${utcMs.length} instants came with ${value.length} values; each sample has one of both`);
+  if (utcMs.length !== value.length)
+    throw new UnusableBatchError(`${utcMs.length} instants came with ${value.length} values; each sample has one of both`);
   const bad = utcMs.findIndex((at, index) => !Number.isFinite(at) || !Number.isFinite(value[index]));
-  if (bad >= 0) throw new UnusableBatchError(`sample ${bad + 1} of the batch is (${utcMs[bad]}, ${value[bad]}); instant and value must be finite numbers`);
+  if (bad >= 0)
+    throw new UnusableBatchError(
+      `sample ${bad + 1} of the batch is (${utcMs[bad]}, ${value[bad]}); instant and value must be finite numbers`,
+    );
 }
 
 /** In place of a foreign key: the channel is of this lab and stays there until the transaction ends. */
 async function assertChannel(client: PoolClient, { labId, channelId }: ChannelKey): Promise<void> {
-  const known = isKey(labId) && isKey(channelId) && (await client.query('select 1 from channels where lab_id = $1 and id = $2 for key share', [labId, channelId])).rowCount === 1;
+  const known =
+    isKey(labId) &&
+    isKey(channelId) &&
+    (await client.query('select 1 from channels where lab_id = $1 and id = $2 for key share', [labId, channelId])).rowCount === 1;
   if (!known) throw new UnusableBatchError(`there is no channel ${channelId} in this lab`);
 }
 
@@ -63,19 +74,35 @@ async function insertFew(client: PoolClient, { labId, channelId }: ChannelKey, b
 }
 
 async function copyMany(client: PoolClient, { labId, channelId }: ChannelKey, batch: SampleBatch): Promise<number> {
-  await client.query('create temporary table if not exists arriving_samples (at timestamptz not null, value double precision not null) on commit delete rows');
+  await client.query(
+    'create temporary table if not exists arriving_samples (at timestamptz not null, value double precision not null) on commit delete rows',
+  );
   await client.query('truncate arriving_samples');
-  await pipeline(Readable.from(encodeSamples(batch)), client.query(copyFrom('copy arriving_samples (at, value) from stdin (format binary)')));
-  const result = await client.query('insert into samples (lab_id, channel_id, at, value) select $1, $2, at, value from arriving_samples order by at on conflict do nothing', [labId, channelId]);
+  await pipeline(
+    Readable.from(encodeSamples(batch)),
+    client.query(copyFrom('copy arriving_samples (at, value) from stdin (format binary)')),
+  );
+  const result = await client.query(
+    'insert into samples (lab_id, channel_id, at, value) select $1, $2, at, value from arriving_samples order by at on conflict do nothing',
+    [labId, channelId],
+  );
   return result.rowCount ?? 0;
 }
 
 /** Samples of a channel with `fromUtcMs` ≤ instant ≤ `toUtcMs`, in time order. */
-export async function readSamples(client: PoolClient, { labId, channelId }: ChannelKey, window: { fromUtcMs: number; toUtcMs: number }): Promise<SampleBatch> {
+export async function readSamples(
+  client: PoolClient,
+  { labId, channelId }: ChannelKey,
+  window: { fromUtcMs: number; toUtcMs: number },
+): Promise<SampleBatch> {
   if (!isKey(labId) || !isKey(channelId)) return { utcMs: new Float64Array(), value: new Float64Array() };
   // COPY takes no parameters: both ids have the form of a UUID (just checked) and the instants are whole microseconds.
   const between = `at between ${instantSql(window.fromUtcMs)} and ${instantSql(window.toUtcMs)}`;
-  const stream = client.query(copyTo(`copy (select at, value from samples where lab_id = '${labId}' and channel_id = '${channelId}' and ${between} order by at) to stdout (format binary)`));
+  const stream = client.query(
+    copyTo(
+      `copy (select at, value from samples where lab_id = '${labId}' and channel_id = '${channelId}' and ${between} order by at) to stdout (format binary)`,
+    ),
+  );
   return decodeSamples(stream);
 }
 

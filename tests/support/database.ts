@@ -39,7 +39,10 @@ async function asAdmin<T>(admin: string, work: (client: Client) => Promise<T>): 
 async function template(admin: string): Promise<string> {
   const migrations = join(root, 'db/migrations');
   const digest = createHash('sha256');
-  for (const name of readdirSync(migrations).filter((file) => file.endsWith('.sql')).sort()) digest.update(name).update(readFileSync(join(migrations, name)));
+  for (const name of readdirSync(migrations)
+    .filter((file) => file.endsWith('.sql'))
+    .sort())
+    digest.update(name).update(readFileSync(join(migrations, name)));
   const name = `evenfall_template_${digest.digest('hex').slice(0, 16)}`;
   await asAdmin(admin, async (client) => {
     await client.query('select pg_advisory_lock(7401968)');

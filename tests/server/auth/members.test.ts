@@ -35,12 +35,21 @@ describe('an invitation', () => {
   test('goes out as a mail in plain words and makes a new account a member', async () => {
     const { mail, token } = await invite('Tam.Ferrow@quillfen.example');
     expect(mail).toMatchObject({ to: 'tam.ferrow@quillfen.example', subject: 'Invitation to Quillfen Gravity Laboratory' });
-    expect(mail?.text).toMatch(/Ottilie Brand invites you[^]*as operator\.[^]*arm the rig[^]*\/invitations\/[\w-]{43}\n[^]*once, until 2031-05-13 22:00, Europe\/Zurich/);
+    expect(mail?.text).toMatch(
+      /Ottilie Brand invites you[^]*as operator\.[^]*arm the rig[^]*\/invitations\/[\w-]{43}\n[^]*once, until 2031-05-13 22:00, Europe\/Zurich/,
+    );
 
     const newcomer = new Caller(world.app);
     const offer = await newcomer.get(`/invitations/${token}`).expect(200);
-    expect(offer.body).toEqual({ labName: 'Quillfen Gravity Laboratory', email: 'tam.ferrow@quillfen.example', role: 'operator', hasAccount: false });
-    const joined = await newcomer.post(`/invitations/${token}/accept`, { name: ' Tam Ferrow ', password: 'harbour fog, seven bells' }).expect(200);
+    expect(offer.body).toEqual({
+      labName: 'Quillfen Gravity Laboratory',
+      email: 'tam.ferrow@quillfen.example',
+      role: 'operator',
+      hasAccount: false,
+    });
+    const joined = await newcomer
+      .post(`/invitations/${token}/accept`, { name: ' Tam Ferrow ', password: 'harbour fog, seven bells' })
+      .expect(200);
     expect(joined.body).toMatchObject({ user: { name: 'Tam Ferrow' }, memberships: [{ labId, role: 'operator' }] });
     await newcomer.get(`/labs/${labId}`).expect(200);
     const list = await owner.get(`/labs/${labId}/members`).expect(200);
@@ -63,13 +72,17 @@ describe('an invitation', () => {
   test('is used once', async () => {
     const { token } = await invite('tam@quillfen.example');
     await new Caller(world.app).post(`/invitations/${token}/accept`, { name: 'Tam', password: 'harbour fog, seven bells' }).expect(200);
-    const again = await new Caller(world.app).post(`/invitations/${token}/accept`, { name: 'Tam', password: 'harbour fog, seven bells' }).expect(404);
+    const again = await new Caller(world.app)
+      .post(`/invitations/${token}/accept`, { name: 'Tam', password: 'harbour fog, seven bells' })
+      .expect(404);
     expect(again.body.detail).toContain('used, withdrawn or is too old');
   });
 
   test('accepted by two at the same moment makes one account', async () => {
     const { token } = await invite('twice@quillfen.example');
-    const answers = await Promise.all([1, 2].map(() => new Caller(world.app).post(`/invitations/${token}/accept`, { name: 'Tam', password: 'harbour fog, seven bells' })));
+    const answers = await Promise.all(
+      [1, 2].map(() => new Caller(world.app).post(`/invitations/${token}/accept`, { name: 'Tam', password: 'harbour fog, seven bells' })),
+    );
     expect(answers.map((answer) => answer.status).sort()).toEqual([200, 404]);
   });
 
@@ -109,7 +122,10 @@ describe('an invitation', () => {
   });
 
   test('sent again with the same key is sent once', async () => {
-    const send = () => owner.post(`/labs/${labId}/invitations`, { email: 'once@quillfen.example', role: 'viewer' }).set('Idempotency-Key', 'one-and-the-same');
+    const send = () =>
+      owner
+        .post(`/labs/${labId}/invitations`, { email: 'once@quillfen.example', role: 'viewer' })
+        .set('Idempotency-Key', 'one-and-the-same');
     const [first, second] = [await send().expect(201), await send().expect(201)];
     expect(second.body).toEqual(first.body);
     expect(await world.mails()).toHaveLength(1);
@@ -174,9 +190,14 @@ describe('members', () => {
   test('keep an owner also when two owners demote each other at the same moment', async () => {
     const second = await member(connection(), labId, { role: 'owner' });
     const other = await caller(world.app, second.email);
-    const answers = await Promise.all([owner.patch(`/labs/${labId}/members/${second.id}`, { role: 'viewer' }), other.patch(`/labs/${labId}/members/${ownerId}`, { role: 'viewer' })]);
+    const answers = await Promise.all([
+      owner.patch(`/labs/${labId}/members/${second.id}`, { role: 'viewer' }),
+      other.patch(`/labs/${labId}/members/${ownerId}`, { role: 'viewer' }),
+    ]);
     expect(answers.map((answer) => answer.status)).toContain(200);
-    const { rows } = await connection().pool.query(`select count(*)::int as owners from memberships where lab_id = $1 and role = 'owner'`, [labId]);
+    const { rows } = await connection().pool.query(`select count(*)::int as owners from memberships where lab_id = $1 and role = 'owner'`, [
+      labId,
+    ]);
     expect(rows[0].owners).toBe(1);
   });
 });
@@ -202,7 +223,9 @@ describe('the lab', () => {
     const pages: { seq: number; who: string; kind: string; data: Record<string, unknown> }[] = [];
     let next: string | null = '';
     while (next !== null) {
-      const answer: { body: { items: typeof pages; next: string | null } } = await owner.get(`/labs/${labId}/audit?limit=2${next === '' ? '' : `&cursor=${next}`}`).expect(200);
+      const answer: { body: { items: typeof pages; next: string | null } } = await owner
+        .get(`/labs/${labId}/audit?limit=2${next === '' ? '' : `&cursor=${next}`}`)
+        .expect(200);
       pages.push(...answer.body.items);
       next = answer.body.next;
     }
@@ -214,7 +237,9 @@ describe('the lab', () => {
       [1, 'Ottilie Brand', 'person.signed-in'],
     ]);
     expect(pages[3]?.data).toMatchObject({ userId: user.id, from: 'viewer', to: 'analyst' });
-    const rows = (await auditPage(connection().db, { labId, beforeSeq: null, limit: 100 })).reverse().map(({ labId: _lab, ...link }) => link as ChainedEvent);
+    const rows = (await auditPage(connection().db, { labId, beforeSeq: null, limit: 100 }))
+      .reverse()
+      .map(({ labId: _lab, ...link }) => link as ChainedEvent);
     expect(verifyChain(rows, sha256)).toMatchObject({ valid: true, events: 5 });
     expect(JSON.stringify(rows)).not.toContain('@');
   });

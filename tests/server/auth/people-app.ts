@@ -48,15 +48,28 @@ export async function peopleApp(connection: Connection, changes: Partial<ServerC
   const sessions = createSessions({ db: connection.db, clock, newToken, sha256 });
   // The routes of people touch no rig: what drives rigs and streams is left out.
   const services = {
-    config: testConfig(folder, changes), clock, log: pino({ level: 'silent' }), newId: randomUUID, newToken, sha256, database: connection, sessions,
+    config: testConfig(folder, changes),
+    clock,
+    log: pino({ level: 'silent' }),
+    newId: randomUUID,
+    newToken,
+    sha256,
+    database: connection,
+    sessions,
     access: new AccessDirectory({ source: accessSource(connection.db, nowUtcMs), sessions, clock, sha256 }),
-    idempotency: createIdempotency(connection.db, nowUtcMs), mail, samples: createSampleStore(connection), breathe: () => Promise.resolve(), pokeJobs: () => undefined,
+    idempotency: createIdempotency(connection.db, nowUtcMs),
+    mail,
+    samples: createSampleStore(connection),
+    breathe: () => Promise.resolve(),
+    pokeJobs: () => undefined,
   } satisfies Partial<Services> as unknown as Services;
   const queue = createJobQueue(connection.db, 'test', nowUtcMs);
   const handlers = mailJobs({ db: connection.db, clock, mail, newToken, sha256 });
   let read = 0;
   return {
-    app: createApp(services, peopleRoutes), clock, services,
+    app: createApp(services, peopleRoutes),
+    clock,
+    services,
     mails: async () => {
       for (let job = await queue.take(Object.keys(handlers)); job !== null; job = await queue.take(Object.keys(handlers))) {
         await handlers[job.kind]?.(job);
@@ -81,16 +94,33 @@ async function mailIn(bytes: Buffer) {
 }
 
 const testConfig = (stateDir: string, changes: Partial<ServerConfig>): ServerConfig => ({
-  mode: 'test', databaseUrl: '', host: '127.0.0.1', port: 4460, publicUrl: null, trustedProxies: 0, demo: false, stateDir, webDir: null, smtpUrl: null,
-  mailFrom: 'Evenfall <evenfall@quillfen.example>', logLevel: 'silent',
-  limits: { requestsPerMinute: 100_000, interventionsPerMinute: 1000, jsonBytes: 100_000, importBytes: 100_000, streamsPerUser: 6 }, ...changes,
+  mode: 'test',
+  databaseUrl: '',
+  host: '127.0.0.1',
+  port: 4460,
+  publicUrl: null,
+  trustedProxies: 0,
+  demo: false,
+  stateDir,
+  webDir: null,
+  smtpUrl: null,
+  mailFrom: 'Evenfall <evenfall@quillfen.example>',
+  logLevel: 'silent',
+  limits: { requestsPerMinute: 100_000, interventionsPerMinute: 1000, jsonBytes: 100_000, importBytes: 100_000, streamsPerUser: 6 },
+  ...changes,
 });
 
 /** A member with the password of all these tests. */
 export async function member(connection: Connection, labId: string, who: { role: Role; name?: string; demo?: boolean }) {
   passwordHash ??= hashPassword(password);
   const email = `${who.role}.${randomUUID().slice(0, 8)}@quillfen.example`;
-  const user = await createUser(connection.db, { name: who.name ?? `Some ${who.role}`, email, passwordHash: await passwordHash, demo: who.demo ?? false, nowUtcMs: eveningUtcMs });
+  const user = await createUser(connection.db, {
+    name: who.name ?? `Some ${who.role}`,
+    email,
+    passwordHash: await passwordHash,
+    demo: who.demo ?? false,
+    nowUtcMs: eveningUtcMs,
+  });
   if (user === null) throw new Error('the address is taken');
   await addMember(connection.db, { labId, userId: user.id, role: who.role, nowUtcMs: eveningUtcMs });
   return user;
@@ -107,7 +137,8 @@ export class Caller {
   }
 
   get = (path: string) => this.agent.get(`/api${path}`);
-  post = (path: string, body: object = {}) => this.agent.post(`/api${path}`).set(sameOrigin).set('Idempotency-Key', randomUUID()).send(body);
+  post = (path: string, body: object = {}) =>
+    this.agent.post(`/api${path}`).set(sameOrigin).set('Idempotency-Key', randomUUID()).send(body);
   patch = (path: string, body: object) => this.agent.patch(`/api${path}`).set(sameOrigin).send(body);
   delete = (path: string) => this.agent.delete(`/api${path}`).set(sameOrigin);
   signIn = (email: string, given = password) => this.post('/session', { email, password: given });

@@ -27,7 +27,11 @@ function describeSessionPort(name: string, make: (nowUtcMs: () => number) => Ses
     test('a token names its account until it is ended', async () => {
       const { user } = await person('operator');
       const { token } = await port().create(user.id, device);
-      expect(await port().validate(token)).toMatchObject({ userId: user.id, createdAt: new Date(eveningUtcMs), authAt: new Date(eveningUtcMs) });
+      expect(await port().validate(token)).toMatchObject({
+        userId: user.id,
+        createdAt: new Date(eveningUtcMs),
+        authAt: new Date(eveningUtcMs),
+      });
       await port().end(token);
       expect(await port().validate(token)).toBeNull();
     });

@@ -65,7 +65,10 @@ describe('signing in', () => {
     await world.clock.advance(60_000);
     const refused = await browser.signIn(user.email).expect(429);
     expect(refused.headers['retry-after']).toBe('840');
-    expect(refused.body).toMatchObject({ code: 'too-many-requests', detail: 'There were too many tries that failed. Try again in 14 min.' });
+    expect(refused.body).toMatchObject({
+      code: 'too-many-requests',
+      detail: 'There were too many tries that failed. Try again in 14 min.',
+    });
     await browser.signIn((await member(connection(), labId, { role: 'viewer' })).email).expect(200);
     await world.clock.advance(840_000);
     await browser.signIn(user.email).expect(200);
@@ -142,7 +145,10 @@ describe('a forgotten password', () => {
     await browser.post('/password-resets', { email: user.email }).expect(202);
     const token = tokenIn((await world.mails())[0]?.text ?? '');
     const refused = await browser.post('/password-resets/complete', { token, password: 'password1234' }).expect(400);
-    expect(refused.body).toMatchObject({ code: 'invalid-input', errors: [{ path: 'password', message: expect.stringContaining('tried first') }] });
+    expect(refused.body).toMatchObject({
+      code: 'invalid-input',
+      errors: [{ path: 'password', message: expect.stringContaining('tried first') }],
+    });
     await browser.post('/password-resets/complete', { token, password: 'short' }).expect(400);
     await browser.post('/password-resets/complete', { token, password: 'harbour fog, seven bells' }).expect(204);
   });
@@ -175,7 +181,9 @@ describe('a forgotten password', () => {
     const user = await member(connection(), labId, { role: 'operator' });
     await new Caller(world.app).post('/password-resets', { email: user.email });
     const token = tokenIn((await world.mails())[0]?.text ?? '');
-    const { rows } = await connection().pool.query('select (select json_agg(j) from jobs j)::text as jobs, (select json_agg(p) from password_resets p)::text as resets');
+    const { rows } = await connection().pool.query(
+      'select (select json_agg(j) from jobs j)::text as jobs, (select json_agg(p) from password_resets p)::text as resets',
+    );
     expect(rows[0].resets).toContain(user.id);
     expect(`${rows[0].jobs} ${rows[0].resets}`).not.toContain(token);
   });

@@ -9,7 +9,11 @@ import { createSmtpMail } from '@/server/notify/smtp-mail';
 
 const clock = { utcMs: () => Date.parse('2031-05-06T20:00:00.123Z') };
 const from = 'Evenfall <evenfall@quillfen.example>';
-const letter = { to: 'ilse@quillfen.example', subject: 'Grüße – near − far', text: 'First line.\n\n.A line that begins with a dot.\nG = 6.674(15) × 10⁻¹¹\n' };
+const letter = {
+  to: 'ilse@quillfen.example',
+  subject: 'Grüße – near − far',
+  text: 'First line.\n\n.A line that begins with a dot.\nG = 6.674(15) × 10⁻¹¹\n',
+};
 
 let folder: string;
 let mailbox: DemoMailbox;
@@ -83,11 +87,22 @@ test('a mail server that refuses rejects with its own words', async () => {
 
 describe('the words of the mails', () => {
   const person = { to: 'a@quillfen.example', name: 'Ilse Marrow' };
-  const invitation = { to: person.to, labName: 'Quillfen Gravity Laboratory', timeZone: 'Europe/Zurich', invitedBy: 'Ottilie Brand', link: 'https://balance.example/invitations/t', expiresAtUtcMs: clock.utcMs() };
+  const invitation = {
+    to: person.to,
+    labName: 'Quillfen Gravity Laboratory',
+    timeZone: 'Europe/Zurich',
+    invitedBy: 'Ottilie Brand',
+    link: 'https://balance.example/invitations/t',
+    expiresAtUtcMs: clock.utcMs(),
+  };
 
   test.each([
     ['invitation', invitationMail({ ...invitation, role: 'viewer' }), invitation.link],
-    ['reset', passwordResetMail({ ...person, link: 'https://balance.example/reset-password?token=t', validMinutes: 30 }), 'https://balance.example/reset-password?token=t'],
+    [
+      'reset',
+      passwordResetMail({ ...person, link: 'https://balance.example/reset-password?token=t', validMinutes: 30 }),
+      'https://balance.example/reset-password?token=t',
+    ],
   ])('of the %s hold the one link on a line of its own', (_name, mail, link) => {
     expect(mail.text.split('\n').filter((line) => line.includes('http'))).toEqual([link]);
   });

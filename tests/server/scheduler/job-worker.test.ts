@@ -52,7 +52,9 @@ test('kinds without a handler are left in the queue', async () => {
 });
 
 test('a failed job is reported and put back, and the next is done', async () => {
-  const { done, problems, worker } = work(['mail', 'mail'], (job) => (job.id === '0' ? Promise.reject(new Error('refused')) : Promise.resolve()));
+  const { done, problems, worker } = work(['mail', 'mail'], (job) =>
+    job.id === '0' ? Promise.reject(new Error('refused')) : Promise.resolve(),
+  );
   await settle();
   expect(done).toEqual(['fail 0: refused', 'finish 1']);
   expect(problems).toHaveLength(1);
@@ -102,7 +104,12 @@ test('a queue that cannot be reached is asked again later', async () => {
   let away = true;
   const problems: unknown[] = [];
   const take: JobQueue['take'] = (kinds) => (away ? Promise.reject(new Error('away')) : queue.take(kinds));
-  const worker = startJobWorker({ queue: { ...queue, take }, clock, handlers: { mail: () => Promise.resolve() }, onProblem: ({ error }) => problems.push(error) });
+  const worker = startJobWorker({
+    queue: { ...queue, take },
+    clock,
+    handlers: { mail: () => Promise.resolve() },
+    onProblem: ({ error }) => problems.push(error),
+  });
   await clock.advance(2500);
   expect(problems.length).toBeGreaterThan(1);
   away = false;

@@ -5,13 +5,24 @@ import { eveningUtcMs, makeLab, sha256 } from './rows';
 
 const database = databaseOfThisFile();
 const db = () => database().connection.db;
-const fact = (labId: string, n: number) => ({ labId, who: { id: null, name: 'server' }, kind: 'lab.changed', data: { n, gone: undefined, odd: '\u0000' }, utcMs: eveningUtcMs + n });
+const fact = (labId: string, n: number) => ({
+  labId,
+  who: { id: null, name: 'server' },
+  kind: 'lab.changed',
+  data: { n, gone: undefined, odd: '\u0000' },
+  utcMs: eveningUtcMs + n,
+});
 
 test('entries of many writers at once make one chain without gaps', async () => {
   const lab = await makeLab(db());
   await Promise.all(Array.from({ length: 20 }, (_, n) => db().transaction((tx) => appendAudit(tx, fact(lab.id, n), sha256))));
   const rows = (await auditPage(db(), { labId: lab.id, beforeSeq: null, limit: 100 })).reverse();
-  expect(verifyChain(rows.map(({ labId: _lab, ...link }) => link), sha256)).toMatchObject({ valid: true, events: 20 });
+  expect(
+    verifyChain(
+      rows.map(({ labId: _lab, ...link }) => link),
+      sha256,
+    ),
+  ).toMatchObject({ valid: true, events: 20 });
 });
 
 test('each lab has a chain of its own', async () => {

@@ -131,7 +131,8 @@ describe('rig leases', () => {
   test('one holder at a time, each new one with a higher epoch', async () => {
     const lab = await makeLab(db());
     const rigId = await makeRig(db(), lab.id);
-    const take = (holder: string, afterMs: number) => takeRigLease(db(), { labId: lab.id, rigId, holder, nowUtcMs: eveningUtcMs + afterMs, untilUtcMs: eveningUtcMs + afterMs + 5000 });
+    const take = (holder: string, afterMs: number) =>
+      takeRigLease(db(), { labId: lab.id, rigId, holder, nowUtcMs: eveningUtcMs + afterMs, untilUtcMs: eveningUtcMs + afterMs + 5000 });
     expect(await take('a', 0)).toBe(1);
     expect(await take('b', 4999)).toBeNull();
     expect(await take('a', 4999)).toBe(1);

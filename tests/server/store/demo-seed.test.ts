@@ -63,5 +63,10 @@ test('its protocols are right for its rig, one of them issued', async () => {
 
 test('its audit chain begins with its making', async () => {
   const rows = await auditPage(db(), { labId: demoIds.lab, beforeSeq: null, limit: 10 });
-  expect(verifyChain(rows.map(({ labId: _lab, ...link }) => link), sha256)).toMatchObject({ valid: true, events: 1 });
+  expect(
+    verifyChain(
+      rows.map(({ labId: _lab, ...link }) => link),
+      sha256,
+    ),
+  ).toMatchObject({ valid: true, events: 1 });
 });

@@ -7,7 +7,8 @@ import { eveningUtcMs } from './rows';
 const database = databaseOfThisFile();
 let nowUtcMs = eveningUtcMs;
 const queue = (holder = 'worker') => createJobQueue(database().connection.db, holder, () => nowUtcMs);
-const ask = (payload: unknown, more: { dueAtUtcMs?: number; maxAttempts?: number } = {}) => enqueueJob(database().connection.db, { kind: 'mail', payload, labId: null, nowUtcMs, ...more });
+const ask = (payload: unknown, more: { dueAtUtcMs?: number; maxAttempts?: number } = {}) =>
+  enqueueJob(database().connection.db, { kind: 'mail', payload, labId: null, nowUtcMs, ...more });
 const rowOf = async (id: string) => (await database().connection.db.select().from(jobs).where(eq(jobs.id, id)))[0];
 
 beforeEach(async () => {

@@ -13,10 +13,16 @@ import { demoRigWide } from '@/shared/rig/demo-rigs';
 export const eveningUtcMs = Date.parse('2031-05-06T20:00:00Z');
 export const sha256 = (text: string) => createHash('sha256').update(text, 'utf8').digest('hex');
 
-export const makeLab = (db: Database, name = 'Quillfen Gravity Laboratory') => createLab(db, { name, timeZone: 'Europe/Zurich', nowUtcMs: eveningUtcMs });
+export const makeLab = (db: Database, name = 'Quillfen Gravity Laboratory') =>
+  createLab(db, { name, timeZone: 'Europe/Zurich', nowUtcMs: eveningUtcMs });
 
 export async function makeUser(db: Database, name = 'Ilse Marrow'): Promise<User> {
-  const user = await createUser(db, { name, email: `${name.split(' ')[0]}.${randomUUID().slice(0, 8)}@quillfen.example`, passwordHash: 'none', nowUtcMs: eveningUtcMs });
+  const user = await createUser(db, {
+    name,
+    email: `${name.split(' ')[0]}.${randomUUID().slice(0, 8)}@quillfen.example`,
+    passwordHash: 'none',
+    nowUtcMs: eveningUtcMs,
+  });
   if (user === null) throw new Error('the address is taken');
   return user;
 }
@@ -30,20 +36,64 @@ export async function makeMember(db: Database, labId: string, role: Role): Promi
 export async function makeRig(db: Database, labId: string): Promise<string> {
   const user = await makeUser(db);
   const rig = one(await db.insert(rigs).values({ labId, name: 'North bench', revision: 1, createdAt: eveningUtcMs }).returning());
-  await db.insert(rigRevisions).values({ labId, rigId: rig.id, number: 1, name: rig.name, document: demoRigWide, reason: 'first', madeAt: eveningUtcMs, madeById: user.id, madeBy: user.name });
+  await db
+    .insert(rigRevisions)
+    .values({
+      labId,
+      rigId: rig.id,
+      number: 1,
+      name: rig.name,
+      document: demoRigWide,
+      reason: 'first',
+      madeAt: eveningUtcMs,
+      madeById: user.id,
+      madeBy: user.name,
+    });
   return rig.id;
 }
 
 export async function makeChannel(db: Database, labId: string, rigId: string): Promise<string> {
-  const row = one(await db.insert(channels).values({ labId, rigId, name: 'deflection', quantity: 'angle', unit: 'rad', role: 'deflection', source: 'simulated', createdAt: eveningUtcMs }).returning());
+  const row = one(
+    await db
+      .insert(channels)
+      .values({
+        labId,
+        rigId,
+        name: 'deflection',
+        quantity: 'angle',
+        unit: 'rad',
+        role: 'deflection',
+        source: 'simulated',
+        createdAt: eveningUtcMs,
+      })
+      .returning(),
+  );
   return row.id;
 }
 
-const protocol: ProtocolDocument = { formatVersion: 1, name: 'One swing', steps: [{ kind: 'home' }, { kind: 'swing', to: 'near' }] } as ProtocolDocument;
+const protocol: ProtocolDocument = {
+  formatVersion: 1,
+  name: 'One swing',
+  steps: [{ kind: 'home' }, { kind: 'swing', to: 'near' }],
+} as ProtocolDocument;
 
 export const runStart = (labId: string, rigId: string, changes: Partial<RunStart> = {}): RunStart => ({
-  labId, runId: randomUUID(), rigId, rigName: 'North bench', rigRevision: 1, protocolName: protocol.name, protocolRevision: 1, rig: demoRigWide, protocol,
-  massSetLabel: 'lead', timeZone: 'Europe/Zurich', operator: 'Ilse Marrow', notes: '', arm: null, simulated: null, ...changes,
+  labId,
+  runId: randomUUID(),
+  rigId,
+  rigName: 'North bench',
+  rigRevision: 1,
+  protocolName: protocol.name,
+  protocolRevision: 1,
+  rig: demoRigWide,
+  protocol,
+  massSetLabel: 'lead',
+  timeZone: 'Europe/Zurich',
+  operator: 'Ilse Marrow',
+  notes: '',
+  arm: null,
+  simulated: null,
+  ...changes,
 });
 
 export async function makeRun(db: Database, start: RunStart): Promise<boolean> {

@@ -18,16 +18,46 @@ async function freshRun(changes: Partial<RunStart> = {}) {
   return start;
 }
 
-const event = (head: ChainHead, data: Record<string, unknown> = {}) => appendEvent(head, { at: '2031-05-06T20:00:00.123Z', kind: 'step-began', data }, sha256);
+const event = (head: ChainHead, data: Record<string, unknown> = {}) =>
+  appendEvent(head, { at: '2031-05-06T20:00:00.123Z', kind: 'step-began', data }, sha256);
 
 const step = (seq: number, changes: Partial<StepRow> = {}): StepRow => ({
-  seq, path: `${seq}.swing`, kind: 'swing', label: '', station: 'near', plannedStartUtcMs: eveningUtcMs, plannedEndUtcMs: null, startUtcMs: eveningUtcMs + 0.125, endUtcMs: null, uStartS: 0.0002,
-  uEndS: null, angleStartDeg: 0, angleEndDeg: null, outcome: null, angleSource: 'counted', uAngleDeg: 0.01, good: null, ...changes,
+  seq,
+  path: `${seq}.swing`,
+  kind: 'swing',
+  label: '',
+  station: 'near',
+  plannedStartUtcMs: eveningUtcMs,
+  plannedEndUtcMs: null,
+  startUtcMs: eveningUtcMs + 0.125,
+  endUtcMs: null,
+  uStartS: 0.0002,
+  uEndS: null,
+  angleStartDeg: 0,
+  angleEndDeg: null,
+  outcome: null,
+  angleSource: 'counted',
+  uAngleDeg: 0.01,
+  good: null,
+  ...changes,
 });
 
 const write = (start: RunStart, changes: Partial<RunWrite> = {}): RunWrite => ({
-  labId: start.labId, runId: start.runId, expectedSeq: 0, snapshot: { value: 'running' }, chartVersion: 1, steps: [], events: [],
-  summary: { state: 'running', outcome: null, startedAtUtcMs: eveningUtcMs, endedAtUtcMs: null, predictedEndUtcMs: eveningUtcMs + 3_600_000 }, ...changes,
+  labId: start.labId,
+  runId: start.runId,
+  expectedSeq: 0,
+  snapshot: { value: 'running' },
+  chartVersion: 1,
+  steps: [],
+  events: [],
+  summary: {
+    state: 'running',
+    outcome: null,
+    startedAtUtcMs: eveningUtcMs,
+    endedAtUtcMs: null,
+    predictedEndUtcMs: eveningUtcMs + 3_600_000,
+  },
+  ...changes,
 });
 
 test('a commit keeps snapshot, steps, events and summary, and load gives them back', async () => {
@@ -37,7 +67,12 @@ test('a commit keeps snapshot, steps, events and summary, and load gives them ba
   await store.commit(write(start, { events: [first], steps: [step(1)], snapshot: { deadline: eveningUtcMs + 0.25, garbage: '\u0000' } }));
 
   const loaded = await store.load(start.labId, start.runId);
-  expect(loaded).toEqual({ start, snapshot: { deadline: eveningUtcMs + 0.25, garbage: '\u0000' }, chartVersion: 1, chain: { seq: 1, hash: first.hash } });
+  expect(loaded).toEqual({
+    start,
+    snapshot: { deadline: eveningUtcMs + 0.25, garbage: '\u0000' },
+    chartVersion: 1,
+    chain: { seq: 1, hash: first.hash },
+  });
   const [row] = await db().select().from(runSteps).where(eq(runSteps.runId, start.runId));
   expect(row).toMatchObject(step(1));
 });
@@ -46,19 +81,30 @@ test('the stored chain verifies, odd characters of a noisy line included', async
   const store = createRunStore(db());
   const start = await freshRun();
   const chain: ChainedEvent[] = [];
-  for (const text of ['plain', 'nul \u0000', 'lone \udfff', 'ü µ − ×10⁻¹¹']) chain.push(event(chain.at(-1) ?? emptyChain, { text, values: [0.1, -0, 1e21, 5e-324] }));
+  for (const text of ['plain', 'nul \u0000', 'lone \udfff', 'ü µ − ×10⁻¹¹'])
+    chain.push(event(chain.at(-1) ?? emptyChain, { text, values: [0.1, -0, 1e21, 5e-324] }));
   await store.commit(write(start, { events: chain }));
   const rows = await db().select().from(runEvents).where(eq(runEvents.runId, start.runId)).orderBy(asc(runEvents.seq));
-  expect(verifyChain(rows.map(({ labId: _lab, runId: _run, ...link }) => link), sha256)).toMatchObject({ valid: true, events: 4 });
+  expect(
+    verifyChain(
+      rows.map(({ labId: _lab, runId: _run, ...link }) => link),
+      sha256,
+    ),
+  ).toMatchObject({ valid: true, events: 4 });
 });
 
 test('a step row with a known seq replaces the earlier one', async () => {
   const store = createRunStore(db());
   const start = await freshRun();
   await store.commit(write(start, { steps: [step(1)] }));
-  await store.commit(write(start, { steps: [step(1, { outcome: 'done', endUtcMs: eveningUtcMs + 5000.001, angleEndDeg: 20.179 }), step(2)] }));
+  await store.commit(
+    write(start, { steps: [step(1, { outcome: 'done', endUtcMs: eveningUtcMs + 5000.001, angleEndDeg: 20.179 }), step(2)] }),
+  );
   const rows = await db().select().from(runSteps).where(eq(runSteps.runId, start.runId)).orderBy(asc(runSteps.seq));
-  expect(rows.map((row) => [row.seq, row.outcome, row.endUtcMs])).toEqual([[1, 'done', eveningUtcMs + 5000.001], [2, null, null]]);
+  expect(rows.map((row) => [row.seq, row.outcome, row.endUtcMs])).toEqual([
+    [1, 'done', eveningUtcMs + 5000.001],
+    [2, null, null],
+  ]);
 });
 
 test('a writer that does not know the end of the chain is refused and writes nothing', async () => {
@@ -66,7 +112,9 @@ test('a writer that does not know the end of the chain is refused and writes not
   const start = await freshRun();
   const first = event(emptyChain);
   await store.commit(write(start, { events: [first] }));
-  await expect(store.commit(write(start, { expectedSeq: 0, events: [event(emptyChain)], steps: [step(9)] }))).rejects.toThrow(StaleRunError);
+  await expect(store.commit(write(start, { expectedSeq: 0, events: [event(emptyChain)], steps: [step(9)] }))).rejects.toThrow(
+    StaleRunError,
+  );
   expect(await db().select().from(runSteps).where(eq(runSteps.runId, start.runId))).toEqual([]);
   expect((await store.load(start.labId, start.runId))?.chain.seq).toBe(1);
 });
@@ -82,7 +130,9 @@ test('events that do not continue the chain are refused whole', async () => {
   const store = createRunStore(db());
   const start = await freshRun();
   const first = event(emptyChain);
-  await expect(store.commit(write(start, { events: [first, event({ seq: 5, hash: first.hash })] }))).rejects.toThrow('event 6 does not continue the chain');
+  await expect(store.commit(write(start, { events: [first, event({ seq: 5, hash: first.hash })] }))).rejects.toThrow(
+    'event 6 does not continue the chain',
+  );
   expect(await db().select().from(runEvents).where(eq(runEvents.runId, start.runId))).toEqual([]);
 });
 
@@ -102,7 +152,11 @@ test('a rig has one run at a time, and rehearsals beside it', async () => {
   expect(await makeRun(db(), runStart(start.labId, start.rigId))).toBe(false);
   const recipe = { trueG: 6.6743e-11, seed: 1, rateHz: 10, faults: [] };
   expect(await makeRun(db(), runStart(start.labId, start.rigId, { simulated: recipe }))).toBe(true);
-  await store.commit(write(start, { summary: { state: 'stopped', outcome: 'stopped', startedAtUtcMs: eveningUtcMs, endedAtUtcMs: eveningUtcMs, predictedEndUtcMs: null } }));
+  await store.commit(
+    write(start, {
+      summary: { state: 'stopped', outcome: 'stopped', startedAtUtcMs: eveningUtcMs, endedAtUtcMs: eveningUtcMs, predictedEndUtcMs: null },
+    }),
+  );
   expect(await makeRun(db(), runStart(start.labId, start.rigId))).toBe(true);
 });
 
@@ -114,7 +168,11 @@ test('unfinished runs are found after a restart, ended ones and rehearsals are n
   const ids = (await store.unfinished()).map((run) => run.start.runId);
   expect(ids).toContain(start.runId);
   expect(ids).not.toContain(rehearsal.runId);
-  await store.commit(write(start, { summary: { state: 'failed', outcome: 'failed', startedAtUtcMs: null, endedAtUtcMs: eveningUtcMs, predictedEndUtcMs: null } }));
+  await store.commit(
+    write(start, {
+      summary: { state: 'failed', outcome: 'failed', startedAtUtcMs: null, endedAtUtcMs: eveningUtcMs, predictedEndUtcMs: null },
+    }),
+  );
   expect((await store.unfinished()).map((run) => run.start.runId)).not.toContain(start.runId);
 });
 

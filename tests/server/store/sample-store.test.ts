@@ -53,7 +53,9 @@ describe.each([
 
 test('the same instant twice within one batch counts once', async () => {
   const { store, labId, channelId } = await freshChannel();
-  expect(await store.append(labId, channelId, { utcMs: Float64Array.of(eveningUtcMs, eveningUtcMs), value: Float64Array.of(1, 2) })).toEqual({ stored: 1, known: 1 });
+  expect(
+    await store.append(labId, channelId, { utcMs: Float64Array.of(eveningUtcMs, eveningUtcMs), value: Float64Array.of(1, 2) }),
+  ).toEqual({ stored: 1, known: 1 });
 });
 
 test('a window takes both of its ends', async () => {
@@ -75,7 +77,9 @@ test('a channel of another lab takes nothing and shows nothing', async () => {
 
 test('unequal lengths are refused', async () => {
   const { store, labId, channelId } = await freshChannel();
-  await expect(store.append(labId, channelId, { utcMs: Float64Array.of(1, 2), value: Float64Array.of(1) })).rejects.toThrow('2 instants came with 1 values');
+  await expect(store.append(labId, channelId, { utcMs: Float64Array.of(1, 2), value: Float64Array.of(1) })).rejects.toThrow(
+    '2 instants came with 1 values',
+  );
 });
 
 test('the COPY format holds any whole microsecond from 1850 to 2090 and any double, however the stream is cut', async () => {
@@ -84,7 +88,9 @@ test('the COPY format holds any whole microsecond from 1850 to 2090 and any doub
   const sample = fc.record({ us, value: fc.double() });
   await fc.assert(
     fc.asyncProperty(fc.array(sample, { maxLength: 40 }), fc.integer({ min: 1, max: 40 }), async (samples, cutBytes) => {
-      const whole = Buffer.concat([...encodeSamples({ utcMs: Float64Array.from(samples, (s) => s.us / 1000), value: Float64Array.from(samples, (s) => s.value) })]);
+      const whole = Buffer.concat([
+        ...encodeSamples({ utcMs: Float64Array.from(samples, (s) => s.us / 1000), value: Float64Array.from(samples, (s) => s.value) }),
+      ]);
       const cut = async function* () {
         for (let at = 0; at < whole.length; at += cutBytes) yield whole.subarray(at, at + cutBytes);
       };

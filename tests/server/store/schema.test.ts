@@ -37,7 +37,8 @@ test('an audit row can be neither changed nor deleted', async () => {
 describe('samples', () => {
   const lab = '11111111-1111-4111-8111-111111111111';
   const put = (at: string) => run(`insert into samples values ('${lab}', '${lab}', '${at}', 1)`);
-  const placeOf = async (at: string) => (await run(`select tableoid::regclass::text as place from samples where at = '${at}'`)).rows[0]?.place;
+  const placeOf = async (at: string) =>
+    (await run(`select tableoid::regclass::text as place from samples where at = '${at}'`)).rows[0]?.place;
 
   test('lie in the default partition until the month has its own, then move there', async () => {
     await put('2031-05-31T23:59:59.999999Z');
@@ -64,9 +65,16 @@ describe('samples', () => {
 
 test('a row of one lab cannot point into another', async () => {
   const { db } = database().connection;
-  const [a, b] = await db.insert(schema.labs).values(['A', 'B'].map((name) => ({ name, timeZone: 'UTC', createdAt: 0 }))).returning();
-  const [rig] = await db.insert(schema.rigs).values({ labId: a?.id ?? '', name: 'North bench', revision: 1, createdAt: 0 }).returning();
-  const setIn = (labId: string) => db.insert(schema.massSets).values({ labId, rigId: rig?.id ?? '', label: 'lead', sources: { shape: 'none' }, createdAt: 0 });
+  const [a, b] = await db
+    .insert(schema.labs)
+    .values(['A', 'B'].map((name) => ({ name, timeZone: 'UTC', createdAt: 0 })))
+    .returning();
+  const [rig] = await db
+    .insert(schema.rigs)
+    .values({ labId: a?.id ?? '', name: 'North bench', revision: 1, createdAt: 0 })
+    .returning();
+  const setIn = (labId: string) =>
+    db.insert(schema.massSets).values({ labId, rigId: rig?.id ?? '', label: 'lead', sources: { shape: 'none' }, createdAt: 0 });
   await expect(setIn(b?.id ?? '')).rejects.toThrow();
   await setIn(a?.id ?? '');
 });
