@@ -1,16 +1,13 @@
-import { readFileSync } from 'node:fs';
 import { parseArgs } from 'node:util';
 import { NotYetError } from '@/shared/lib/not-yet-error';
 import { adviseProtocol } from '@/shared/protocol/advise';
-import { checkDocumentText, checkProtocol } from '@/shared/protocol/check';
+import { checkProtocol } from '@/shared/protocol/check';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { Finding } from '@/shared/protocol/finding';
 import { predictSignal } from '@/shared/protocol/predict';
-import { templateById, templates, templatesNotYet } from '@/shared/protocol/templates';
 import { planTimeline } from '@/shared/protocol/timeline';
-import { checkRigText } from '@/shared/rig/check';
-import { demoRigWide } from '@/shared/rig/demo-rigs';
 import type { RigDocument } from '@/shared/rig/document';
+import { type Choice, chosenProtocol, listed, Unusable } from './chosen-protocol';
 
 /** `npm run -s plan -- (PROTOCOL.json | --template NAME) [--rig RIG.json]`: what a protocol takes and gives on a rig. */
 
@@ -32,9 +29,6 @@ export interface Plan {
   peakExcursion_rad: null;
   alternatives: null;
 }
-
-/** Input that cannot be planned; the message is for the person who gave it. */
-class Unusable extends Error {}
 
 /**
  * Plans a document on a rig.
@@ -60,25 +54,9 @@ export function makePlan(document: ProtocolDocument, rig: RigDocument): Plan {
   };
 }
 
-function listed(findings: readonly Finding[]): string {
-  return findings.map(({ code, path, message }) => `  ${path === null ? '' : `${path}: `}${message} [${code}]`).join('\n');
-}
-
-interface Choice {
-  document: ProtocolDocument;
-  rig: RigDocument;
-}
-
 function chosen(args: readonly string[]): Choice {
   const { values, positionals } = parsedArguments(args);
-  const rig = values.rig === undefined ? demoRigWide : readRig(values.rig);
-  const [file, ...others] = positionals;
-  if (others.length > 0) throw new Unusable(`One protocol at a time: ${positionals.join(', ')} were given.\n${usage}`);
-  if ((file === undefined) === (values.template === undefined)) {
-    throw new Unusable(`${file === undefined ? 'No protocol was given' : 'Both a file and a template were given'}; one of the two is needed.\n${usage}`);
-  }
-  if (values.template !== undefined) return fromTemplate(values.template, rig);
-  return { document: readProtocol(file as string), rig };
+  return chosenProtocol({ positionals, template: values.template, rig: values.rig, usage });
 }
 
 function parsedArguments(args: readonly string[]) {
@@ -87,33 +65,6 @@ function parsedArguments(args: readonly string[]) {
   } catch (error) {
     throw new Unusable(`${error instanceof Error ? error.message : String(error)}\n${usage}`);
   }
-}
-
-function fromTemplate(id: string, rig: RigDocument): Choice {
-  const template = templateById(id);
-  if (template !== undefined) return { document: template.make(rig), rig: template.rigFor(rig) };
-  if (templatesNotYet.includes(id)) throw new NotYetError(`The template "${id}" needs steps that are not built yet. Built are: ${templates.map((each) => each.id).join(', ')}.`);
-  throw new Unusable(`There is no template "${id}". There are: ${templates.map((each) => each.id).join(', ')}.`);
-}
-
-function readText(path: string): string {
-  try {
-    return readFileSync(path, 'utf8');
-  } catch (error) {
-    throw new Unusable(`${path} cannot be read: ${error instanceof Error ? error.message : String(error)}`);
-  }
-}
-
-function readProtocol(path: string): ProtocolDocument {
-  const { document, findings } = checkDocumentText(readText(path));
-  if (document === null) throw new Unusable(`${path} is no protocol that can be used:\n${listed(findings)}`);
-  return document;
-}
-
-function readRig(path: string): RigDocument {
-  const { rig, findings } = checkRigText(readText(path));
-  if (rig === null) throw new Unusable(`${path} is no rig that can be used:\n${listed(findings)}`);
-  return rig;
 }
 
 export interface Output {
