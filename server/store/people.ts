@@ -51,7 +51,7 @@ export function membershipsOf(db: Handle, userId: string) {
     .orderBy(asc(labs.name), asc(labs.id));
 }
 
-export async function membershipIn(db: Handle, userId: string, labId: string) {
+async function membershipIn(db: Handle, userId: string, labId: string) {
   const rows = await db
     .select(membershipColumns)
     .from(memberships)

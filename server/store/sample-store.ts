@@ -90,7 +90,7 @@ async function copyMany(client: PoolClient, { labId, channelId }: ChannelKey, ba
 }
 
 /** Samples of a channel with `fromUtcMs` ≤ instant ≤ `toUtcMs`, in time order. */
-export async function readSamples(
+async function readSamples(
   client: PoolClient,
   { labId, channelId }: ChannelKey,
   window: { fromUtcMs: number; toUtcMs: number },
