@@ -1,0 +1,115 @@
+import { at } from '../statistics/symmetric';
+import { weightedMean } from '../statistics/weighted-mean';
+import type { RigDocument } from '../rig/document';
+import type { RingDownResult } from './ring-down-fit';
+
+/** A value with its standard uncertainty and degrees of freedom (Infinity where unknown or none are stated). */
+export interface Known {
+  value: number;
+  u: number;
+  nu: number;
+}
+
+/** The free pendulum (sources away) from the ring-down and from what was measured beforehand. */
+export interface FreeOscillator {
+  /** ω_d² + γ² = κ/I, rad2/s2. */
+  omega0Squared: Known;
+  gamma: Known;
+  /** The damped period that belongs to κ, s. */
+  period: Known;
+  /** 1/γ, s; null where the amplitude does not fall. */
+  decayTime: Known | null;
+  /** Share of the ring-down in ω₀² and in γ; the rest is the measured one's. */
+  ringDownShare: { omega0Squared: number; gamma: number };
+  /** |ring-down − measured| in units of their joint u; null where there is only one. */
+  disagreement: { omega0Squared: number | null; gamma: number | null };
+}
+
+export interface MeasuredOscillator {
+  omega: Known | null;
+  gamma: Known | null;
+}
+
+/** `measured.period_s` and `measured.decayTime_s` as ω_d and γ. */
+export function measuredOscillator(rig: RigDocument): MeasuredOscillator {
+  const { period_s: period, decayTime_s: decay } = rig.measured ?? {};
+  return {
+    omega:
+      period === undefined
+        ? null
+        : { value: (2 * Math.PI) / period.value, u: (2 * Math.PI * period.u) / period.value ** 2, nu: period.nu ?? Infinity },
+    gamma: decay === undefined ? null : { value: 1 / decay.value, u: decay.u / decay.value ** 2, nu: decay.nu ?? Infinity },
+  };
+}
+
+/**
+ * Means weighted by u⁻² of what the ring-down and the measurement say about κ/I = ω² + γ² and about γ.
+ * Null when neither says anything about the frequency.
+ */
+export function combine(ringDown: RingDownResult | null, measured: MeasuredOscillator): FreeOscillator | null {
+  const gammas = present([ringDown === null ? null : fitted(ringDown, 1), measured.gamma]);
+  if (gammas.length === 0) gammas.push({ value: 0, u: 0, nu: Infinity });
+  const gamma = meanOf(gammas);
+  const squares = present([
+    ringDown === null ? null : squareOfRingDown(ringDown),
+    measured.omega === null ? null : squareOfMeasured(measured.omega, measured.gamma ?? gamma.known),
+  ]);
+  if (squares.length === 0) return null;
+  const omega0Squared = meanOf(squares);
+  const periods = present([
+    ringDown === null ? null : periodOf(fitted(ringDown, 0)),
+    measured.omega === null ? null : periodOf(measured.omega),
+  ]);
+  const omegaSquared = omega0Squared.known.value - gamma.known.value ** 2;
+  return {
+    omega0Squared: omega0Squared.known,
+    gamma: gamma.known,
+    period: { value: (2 * Math.PI) / Math.sqrt(omegaSquared), u: meanOf(periods).known.u, nu: meanOf(periods).known.nu },
+    decayTime:
+      gamma.known.value > 0 ? { value: 1 / gamma.known.value, u: gamma.known.u / gamma.known.value ** 2, nu: gamma.known.nu } : null,
+    ringDownShare: {
+      omega0Squared: ringDown === null ? 0 : (omega0Squared.weights[0] as number),
+      gamma: ringDown === null ? 0 : (gamma.weights[0] as number),
+    },
+    disagreement: { omega0Squared: disagreementOf(squares), gamma: gammas.length < 2 ? null : disagreementOf(gammas) },
+  };
+}
+
+const present = (values: (Known | null)[]): Known[] => values.filter((one) => one !== null);
+
+function fitted(ringDown: RingDownResult, index: 0 | 1): Known {
+  return {
+    value: index === 0 ? ringDown.omega : ringDown.gamma,
+    u: Math.sqrt(at(ringDown.covariance, index, index)),
+    nu: ringDown.degreesOfFreedom,
+  };
+}
+
+function squareOfRingDown({ omega, gamma, covariance, degreesOfFreedom }: RingDownResult): Known {
+  const variance = omega ** 2 * at(covariance, 0, 0) + 2 * omega * gamma * at(covariance, 0, 1) + gamma ** 2 * at(covariance, 1, 1);
+  return { value: omega ** 2 + gamma ** 2, u: 2 * Math.sqrt(Math.max(variance, 0)), nu: degreesOfFreedom };
+}
+
+function squareOfMeasured(omega: Known, gamma: Known): Known {
+  return { value: omega.value ** 2 + gamma.value ** 2, u: 2 * Math.hypot(omega.value * omega.u, gamma.value * gamma.u), nu: omega.nu };
+}
+
+const periodOf = (omega: Known): Known => ({
+  value: (2 * Math.PI) / omega.value,
+  u: (2 * Math.PI * omega.u) / omega.value ** 2,
+  nu: omega.nu,
+});
+
+function meanOf(values: readonly Known[]): { known: Known; weights: number[] } {
+  const { mean, u, weights } = weightedMean(values);
+  const denominator = values.reduce((sum, one, i) => sum + (one.nu === Infinity ? 0 : (weights[i] as number) ** 2 / one.nu), 0);
+  return { known: { value: mean, u, nu: denominator === 0 ? Infinity : 1 / denominator }, weights };
+}
+
+function disagreementOf(values: readonly Known[]): number | null {
+  const [a, b] = values;
+  if (a === undefined || b === undefined) return null;
+  const difference = Math.abs(a.value - b.value);
+  const u = Math.hypot(a.u, b.u);
+  return difference === 0 ? 0 : difference / u;
+}

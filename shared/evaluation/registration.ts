@@ -1,0 +1,67 @@
+import type { Archive } from '../archive/read-archive';
+import { listOf } from '../archive/read-archive';
+import { UnusableArchive } from '../archive/unusable-archive';
+import { NotYetError } from '../lib/not-yet-error';
+
+export type EvaluationMethod = 'equilibrium' | 'period' | 'acceleration' | 'modulation';
+export const evaluationMethods: readonly EvaluationMethod[] = ['equilibrium', 'period', 'acceleration', 'modulation'];
+
+export interface EvaluationOptions {
+  method?: EvaluationMethod;
+  channel?: string;
+  /** Bound of equivalence of an empty control, rad. */
+  boundRad?: number;
+}
+
+/** What is to be done, and whether that is what the protocol registered beforehand. */
+export interface EvaluationPlan {
+  method: EvaluationMethod;
+  drift: 'aba' | 'polynomial';
+  order: number;
+  channel: string;
+  /** Null where nothing was registered. */
+  registered: boolean | null;
+}
+
+/**
+ * Options first, then what the protocol registered, then the defaults.
+ * @throws NotYetError for methods and drift models that are not built; UnusableArchive when the channel is not plain.
+ */
+export function evaluationPlan(archive: Archive, options: EvaluationOptions): EvaluationPlan {
+  const registered = archive.registered;
+  const method = options.method ?? registered?.method ?? 'equilibrium';
+  if (method !== 'equilibrium') throw new NotYetError(`not-yet: the method "${method}" is not built yet; "equilibrium" is`);
+  if (options.boundRad !== undefined) throw new NotYetError('not-yet: the test of an empty control against a bound is not built yet');
+  const drift = registered?.drift ?? 'aba';
+  if (drift === 'gls')
+    throw new NotYetError('not-yet: the drift model "gls" of protocol.json is not built yet; "aba" and "polynomial" are');
+  const channel = chooseChannel(archive, options.channel ?? registered?.channel ?? null);
+  const asRegistered =
+    method === (registered?.method ?? 'equilibrium') && (registered?.channel === undefined || registered.channel === channel);
+  return { method, drift, order: registered?.order ?? 1, channel, registered: registered === null ? null : asRegistered };
+}
+
+function chooseChannel(archive: Archive, wanted: string | null): string {
+  const deflections = archive.channels.filter(({ role }) => role === 'deflection');
+  const names = listOf(deflections.map(({ name }) => name));
+  if (wanted === null) {
+    const [only, ...others] = deflections;
+    if (only === undefined)
+      throw new UnusableArchive({ file: 'datapackage.json' }, 'the archive holds no channel with the role deflection');
+    if (others.length > 0)
+      throw new UnusableArchive(
+        { file: 'datapackage.json' },
+        `the archive holds the deflection channels ${names}; say which with --channel`,
+      );
+    return only.name;
+  }
+  const found = archive.channels.find(({ name }) => name === wanted);
+  if (found === undefined)
+    throw new UnusableArchive({ file: 'datapackage.json' }, `there is no channel "${wanted}"; deflection channels: ${names}`);
+  if (found.role !== 'deflection')
+    throw new UnusableArchive(
+      { file: 'datapackage.json' },
+      `the channel "${wanted}" has the role ${found.role}; deflection channels: ${names}`,
+    );
+  return found.name;
+}

@@ -1,0 +1,126 @@
+import { at, bilinear, type Matrix, solveSymmetric } from '../statistics/symmetric';
+import { leastSquares } from '../statistics/least-squares';
+import { offset, ringDownSegment, type RingDownData } from '../statistics/ring-down';
+import { isOscillation, type RingDownStart } from '../statistics/ring-down-start';
+import { fitSeparable, solveAtFixedAlpha, type SeparableFit } from '../statistics/variable-projection';
+
+/** What the dwells themselves say about the free pendulum. */
+export interface RingDownResult {
+  /** Free damped angular frequency, rad/s, and decay rate, 1/s: what the pendulum would do without the sources. */
+  omega: number;
+  gamma: number;
+  /** Covariance of (ω, γ). */
+  covariance: Matrix;
+  degreesOfFreedom: number;
+  /** How ω and γ would change if the sources stiffened segment i by d(shift), per rad2/s2. */
+  omegaByShift: number[];
+  gammaByShift: number[];
+}
+
+export interface DwellFit {
+  fit: SeparableFit;
+  /** Null where the dwells hold no ringing to speak of and ω, γ were held at the measured ones. */
+  ringDown: RingDownResult | null;
+  /** Covariance of the (ω, γ) that the centres were fitted with. */
+  alphaCovariance: Matrix;
+}
+
+/** Ringing that explains less than this many times what noise alone would is none. */
+const leastSignificance = 10;
+
+/**
+ * Fits all segments with one ω and γ. Without ringing, or with none that tells a frequency, both are held at `measured`.
+ * Returns null when there is neither.
+ */
+export function fitRingDown(data: readonly RingDownData[], start: RingDownStart | null, measured: HeldOscillation | null): DwellFit | null {
+  const segments = data.map(ringDownSegment);
+  if (start !== null) {
+    const fit = fitSeparable(segments, [start.omega, start.gamma], { allowed: isOscillation });
+    if (tells(fit, data)) {
+      const alphaCovariance = honestCovariance(fit);
+      return {
+        fit,
+        alphaCovariance,
+        ringDown: {
+          ...shiftDerivatives(fit),
+          omega: fit.alpha[0] as number,
+          gamma: fit.alpha[1] as number,
+          covariance: alphaCovariance,
+          degreesOfFreedom: Math.max(1, data.length - 2),
+        },
+      };
+    }
+  }
+  if (measured === null) return null;
+  return { fit: solveAtFixedAlpha(segments, [measured.omega, measured.gamma]), ringDown: null, alphaCovariance: measured.covariance };
+}
+
+/** ω (rad/s) and γ (1/s) known from elsewhere, with their covariance. */
+export interface HeldOscillation {
+  omega: number;
+  gamma: number;
+  covariance: Matrix;
+}
+
+function tells(fit: SeparableFit, data: readonly RingDownData[]): boolean {
+  const u = Math.sqrt(at(fit.alphaCovariance, 0, 0));
+  if (!isOscillation(fit.alpha) || !(u < 0.05 * (fit.alpha[0] as number))) return false;
+  const withoutRinging = data.reduce((sum, one) => sum + straightResidual(one), 0);
+  return (withoutRinging - fit.ssr) / (2 * data.length + 2) > leastSignificance * fit.variance;
+}
+
+function straightResidual({ tS, y, weight }: RingDownData): number {
+  const root = weight?.map(Math.sqrt) ?? tS.map(() => 1);
+  return leastSquares(
+    [root, tS.map((t, i) => t * (root[i] as number))],
+    y.map((value, i) => value * (root[i] as number)),
+  ).ssr;
+}
+
+/**
+ * Residuals of a dwell hang together (drift, seismic noise), so the covariance that takes them as independent may be far too
+ * small. The scatter of what each whole dwell says about (ω, γ) does not have that fault; the greater of the two is used.
+ */
+function honestCovariance(fit: SeparableFit): Matrix {
+  const count = fit.segments.length;
+  if (count < 4) return fit.alphaCovariance;
+  const inverse = fit.alpha.map((_, j) =>
+    solveSymmetric(
+      fit.information,
+      fit.alpha.map((__, i) => (i === j ? 1 : 0)),
+    ),
+  );
+  const steps = fit.segments.map(({ score }) => inverse.map((row) => row.reduce((sum, value, i) => sum + value * (score[i] as number), 0)));
+  const between = fit.alpha.map((_, i) =>
+    fit.alpha.map((__, j) => (count / (count - 2)) * steps.reduce((sum, step) => sum + (step[i] as number) * (step[j] as number), 0)),
+  );
+  return at(between, 0, 0) > at(fit.alphaCovariance, 0, 0) ? between : fit.alphaCovariance;
+}
+
+function shiftDerivatives(fit: SeparableFit): Pick<RingDownResult, 'omegaByShift' | 'gammaByShift'> {
+  // With ωᵢ² = ω² + sᵢ, a change of sᵢ is to segment i what a change of ω by ds/2ω is; the fit takes it back.
+  const pull = -1 / (2 * (fit.alpha[0] as number));
+  const changes = fit.segments.map(({ information }) =>
+    solveSymmetric(fit.information, [at(information, 0, 0) * pull, at(information, 1, 0) * pull]),
+  );
+  return {
+    omegaByShift: changes.map(([omegaChange]) => omegaChange as number),
+    gammaByShift: changes.map(([, gammaChange]) => gammaChange as number),
+  };
+}
+
+export interface CentreFit {
+  value: number;
+  u: number;
+  /** ∂centre/∂(ω, γ) */
+  shift: number[];
+}
+
+/** Fitted centre of a segment, rad, with its uncertainty from the residuals and from ω and γ. */
+export function centreOf(found: DwellFit, index: number): CentreFit {
+  const segment = found.fit.segments[index];
+  if (segment === undefined) throw new Error(`there is no segment ${index}`);
+  const shift = segment.shift[offset] as number[];
+  const own = Number.isFinite(found.fit.variance) ? found.fit.variance * at(segment.inverseNormal, offset, offset) : 0;
+  return { value: segment.coefficients[offset] as number, u: Math.sqrt(own + bilinear(shift, found.alphaCovariance, shift)), shift };
+}
