@@ -130,12 +130,16 @@ function unequalSides(dwells: readonly SideDwell[]): Finding[] {
   if (near.length === 0 || far.length === 0) return [];
   const advice = (message: string): Finding[] => [{ code: 'unequal-sides', path: null, message }];
   if (Math.abs(near.length - far.length) > 1) {
-    return advice(`There are ${near.length} near dwells and ${far.length} far dwells. Plan as many of the one as of the other, or one more: the side with fewer decides the uncertainty.`);
+    return advice(
+      `There are ${near.length} near dwells and ${far.length} far dwells. Plan as many of the one as of the other, or one more: the side with fewer decides the uncertainty.`,
+    );
   }
   const mean = (side: readonly SideDwell[]) => side.reduce((sum, dwell) => sum + dwell.durationS, 0) / side.length;
   const [nearS, farS] = [mean(near), mean(far)];
   if (Math.abs(nearS - farS) <= equalLengths * Math.max(nearS, farS)) return [];
-  return advice(`Near dwells last ${nearS.toFixed(0)} s on average, far dwells ${farS.toFixed(0)} s. Make them equally long: the shorter side decides the uncertainty, and what is wrong with a fit is then alike on both sides.`);
+  return advice(
+    `Near dwells last ${nearS.toFixed(0)} s on average, far dwells ${farS.toFixed(0)} s. Make them equally long: the shorter side decides the uncertainty, and what is wrong with a fit is then alike on both sides.`,
+  );
 }
 
 function driftNotCancelled(dwells: readonly SideDwell[]): Finding[] {
@@ -149,5 +153,7 @@ function driftNotCancelled(dwells: readonly SideDwell[]): Finding[] {
     );
   }
   if (dwells.length >= 3) return [];
-  return advice(`With ${dwells.length} dwells there is no telling drift from signal. Plan at least 3 in alternation, such as near, far, near.`);
+  return advice(
+    `With ${dwells.length} dwells there is no telling drift from signal. Plan at least 3 in alternation, such as near, far, near.`,
+  );
 }

@@ -25,7 +25,11 @@ interface Walk {
 export function motionFindings(document: ProtocolDocument, rig: RigDocument, startDeg: number | null): Finding[] {
   const walk: Walk = { rig, findings: [] };
   if (rig.motion === undefined) {
-    walk.findings.push({ code: 'motion-missing', path: null, message: 'The rig document has no motion section, so the protocol can be neither planned nor run on it. Add motion to the rig.' });
+    walk.findings.push({
+      code: 'motion-missing',
+      path: null,
+      message: 'The rig document has no motion section, so the protocol can be neither planned nor run on it. Add motion to the rig.',
+    });
   }
   const last = afterList(document.steps, [{ angleDeg: startDeg, swingS: null }], { walk, prefix: '' });
   const station = document.atEnd?.station;
@@ -39,13 +43,21 @@ function afterList(steps: readonly Step[], situations: Situation[], { walk, pref
   let current = situations;
   for (const [index, step] of steps.entries()) {
     const path = `${prefix}${index + 1}.${step.kind}`;
-    current = different(step.kind === 'repeat' ? afterRepeat(step, current, { walk, path }) : current.map((before) => afterStep(step, before, { walk, path })));
+    current = different(
+      step.kind === 'repeat'
+        ? afterRepeat(step, current, { walk, path })
+        : current.map((before) => afterStep(step, before, { walk, path })),
+    );
   }
   return current;
 }
 
 /** Two passes show everything: angles are absolute, so the third pass begins as the second did. */
-function afterRepeat(step: Extract<Step, { kind: 'repeat' }>, before: Situation[], { walk, path }: { walk: Walk; path: string }): Situation[] {
+function afterRepeat(
+  step: Extract<Step, { kind: 'repeat' }>,
+  before: Situation[],
+  { walk, path }: { walk: Walk; path: string },
+): Situation[] {
   const inside = { walk, prefix: `${path}.` };
   const once = afterList(step.steps, before, inside);
   if (step.times === 1) return once;
@@ -86,7 +98,11 @@ function checkHome(before: Situation, at: At): Situation {
   const motion = at.walk.rig.motion;
   if (motion === undefined) return { angleDeg: null, swingS: null };
   for (const { code, reason } of pathObstacles(motion, before.angleDeg ?? motion.homeDeg, motion.homeDeg)) {
-    refuse(at, code, `Homing to motion.homeDeg ${degrees(motion.homeDeg)} cannot be done: ${reason}. Correct the rig's motion, or swing to a place from which the way home is free.`);
+    refuse(
+      at,
+      code,
+      `Homing to motion.homeDeg ${degrees(motion.homeDeg)} cannot be done: ${reason}. Correct the rig's motion, or swing to a place from which the way home is free.`,
+    );
   }
   return { angleDeg: motion.homeDeg, swingS: null };
 }
@@ -94,7 +110,10 @@ function checkHome(before: Situation, at: At): Situation {
 function knownStation(to: SwingTarget, { walk, path }: At): boolean {
   if (resolveTarget(walk.rig, to) !== null) return true;
   const names = Object.keys(walk.rig.stations);
-  const known = names.length === 0 ? 'The rig has none; name an angle as {"angle_deg": …}' : `Known stations: ${names.join(', ')}; or name an angle as {"angle_deg": …}`;
+  const known =
+    names.length === 0
+      ? 'The rig has none; name an angle as {"angle_deg": …}'
+      : `Known stations: ${names.join(', ')}; or name an angle as {"angle_deg": …}`;
   walk.findings.push({ code: 'unknown-station', path, message: `The rig has no station "${String(to)}". ${known}.` });
   return false;
 }
@@ -109,10 +128,14 @@ function checkSwing(step: SwingStep, before: Situation, at: At): Situation {
   if (unknown || rig.motion === undefined) return { angleDeg: before.angleDeg, swingS: null };
   checkSpeed(step, rig.motion, at);
   const target = swingMove(step, rig, before.angleDeg ?? 0);
-  if (before.angleDeg === null) refuse(at, 'home-first', 'The sources would move before their position is known. Put a home step before the first motion.');
+  if (before.angleDeg === null)
+    refuse(at, 'home-first', 'The sources would move before their position is known. Put a home step before the first motion.');
   const fromDeg = before.angleDeg ?? target.targetDeg;
   for (const { code, reason } of pathObstacles(rig.motion, fromDeg, target.targetDeg)) {
-    const move = fromDeg === target.targetDeg ? `Standing at ${degrees(fromDeg)}` : `The move from ${degrees(fromDeg)} to ${degrees(target.targetDeg)}`;
+    const move =
+      fromDeg === target.targetDeg
+        ? `Standing at ${degrees(fromDeg)}`
+        : `The move from ${degrees(fromDeg)} to ${degrees(target.targetDeg)}`;
     refuse(at, code, `${move} is not allowed: ${reason}. ${allowance(rig.motion)}`);
   }
   return { angleDeg: target.targetDeg, swingS: swingMove(step, rig, fromDeg).durationS };
@@ -125,10 +148,18 @@ function allowance(motion: RigMotion): string {
 
 function checkSpeed(step: SwingStep, motion: RigMotion, at: At): void {
   if (step.speed_deg_s !== undefined && step.speed_deg_s > motion.maxSpeed_deg_s) {
-    refuse(at, 'too-fast', `speed_deg_s ${step.speed_deg_s} is above the rig's greatest speed. Accepted are values up to ${motion.maxSpeed_deg_s} deg/s.`);
+    refuse(
+      at,
+      'too-fast',
+      `speed_deg_s ${step.speed_deg_s} is above the rig's greatest speed. Accepted are values up to ${motion.maxSpeed_deg_s} deg/s.`,
+    );
   }
   if (step.acceleration_deg_s2 !== undefined && step.acceleration_deg_s2 > motion.maxAcceleration_deg_s2) {
-    refuse(at, 'too-fast', `acceleration_deg_s2 ${step.acceleration_deg_s2} is above the rig's greatest acceleration. Accepted are values up to ${motion.maxAcceleration_deg_s2} deg/s².`);
+    refuse(
+      at,
+      'too-fast',
+      `acceleration_deg_s2 ${step.acceleration_deg_s2} is above the rig's greatest acceleration. Accepted are values up to ${motion.maxAcceleration_deg_s2} deg/s².`,
+    );
   }
 }
 
@@ -136,13 +167,25 @@ function checkDwell(step: DwellStep, before: Situation, at: At): void {
   const { rig } = at.walk;
   const periodS = rig.measured?.period_s?.value;
   if (step.for_s === undefined && periodS === undefined) {
-    refuse(at, 'period-missing', `A dwell with ${step.periods === undefined ? 'beat_periods' : 'periods'} needs measured.period_s in the rig document. Measure the period first, or give the length as for_s.`);
+    refuse(
+      at,
+      'period-missing',
+      `A dwell with ${step.periods === undefined ? 'beat_periods' : 'periods'} needs measured.period_s in the rig document. Measure the period first, or give the length as for_s.`,
+    );
   }
   if (step.beat_periods === undefined || rig.motion === undefined) return;
   if (before.swingS === null) {
-    refuse(at, 'beat-needs-swing', 'A dwell with beat_periods must directly follow a swing, because the beat counts from its start. Put the swing right before it, or give periods or for_s.');
+    refuse(
+      at,
+      'beat-needs-swing',
+      'A dwell with beat_periods must directly follow a swing, because the beat counts from its start. Put the swing right before it, or give periods or for_s.',
+    );
   } else if (periodS !== undefined && before.swingS >= step.beat_periods * periodS) {
     const beatS = step.beat_periods * periodS;
-    refuse(at, 'beat-too-short', `The swing before this dwell takes ${before.swingS.toFixed(1)} s, which leaves nothing of the beat of ${beatS.toFixed(1)} s. Accepted are beat_periods above ${(before.swingS / periodS).toPrecision(3)}.`);
+    refuse(
+      at,
+      'beat-too-short',
+      `The swing before this dwell takes ${before.swingS.toFixed(1)} s, which leaves nothing of the beat of ${beatS.toFixed(1)} s. Accepted are beat_periods above ${(before.swingS / periodS).toPrecision(3)}.`,
+    );
   }
 }

@@ -5,7 +5,8 @@ import type { Finding } from './finding';
 /** What a field accepts, for the sentence that refuses it. */
 const accepted: Record<string, string> = {
   to: 'the name of a station, or {"angle_deg": a number}',
-  until: '{"localTime": "HH:MM"}; in a wait also {"channel": …, "below" or "slopeBelow_per_h": …}, in a repeat also {"relativeStatisticalU": …}',
+  until:
+    '{"localTime": "HH:MM"}; in a wait also {"channel": …, "below" or "slopeBelow_per_h": …}, in a repeat also {"relativeStatisticalU": …}',
   localTime: 'a time of day written HH:MM, for example "22:00"',
   profile: '"plain" or "shaped"',
   kind: Object.keys(stepFields).join(', '),
@@ -36,7 +37,12 @@ function isTooDeep(value: unknown): boolean {
  */
 export function readDocument(value: unknown): { document: ProtocolDocument | null; findings: Finding[] } {
   if (isTooDeep(value)) {
-    return { document: null, findings: [{ code: 'nested-too-deep', path: null, message: 'The document is nested too deeply to be read. Repeats nest at most 4 deep.' }] };
+    return {
+      document: null,
+      findings: [
+        { code: 'nested-too-deep', path: null, message: 'The document is nested too deeply to be read. Repeats nest at most 4 deep.' },
+      ],
+    };
   }
   const parsed = protocolDocumentSchema.safeParse(value);
   if (parsed.success) return { document: parsed.data, findings: [] };
@@ -88,11 +94,18 @@ function placeOf(path: readonly PropertyKey[], root: unknown): Place {
     parts.push(kind === null ? String((path[index + 1] as number) + 1) : `${(path[index + 1] as number) + 1}.${kind}`);
   }
   const rest = path.slice(index);
-  return { path: parts.length === 0 ? null : parts.join('.'), kind, field: rest.map(String).join('.'), value: rest.reduce<unknown>(child, value) };
+  return {
+    path: parts.length === 0 ? null : parts.join('.'),
+    kind,
+    field: rest.map(String).join('.'),
+    value: rest.reduce<unknown>(child, value),
+  };
 }
 
 function child(value: unknown, key: PropertyKey): unknown {
-  return typeof value === 'object' && value !== null && Object.hasOwn(value, key) ? (value as Record<PropertyKey, unknown>)[key] : undefined;
+  return typeof value === 'object' && value !== null && Object.hasOwn(value, key)
+    ? (value as Record<PropertyKey, unknown>)[key]
+    : undefined;
 }
 
 function unknownFields(keys: readonly string[], place: Place): Finding {
@@ -101,7 +114,11 @@ function unknownFields(keys: readonly string[], place: Place): Finding {
   const inField = place.field === '' ? whose : place.field;
   const known = place.field !== '' ? [] : place.path === null ? documentFields : (stepFields[place.kind as StepKind] ?? []);
   const takes = known.length === 0 ? 'Remove it.' : `Accepted are: ${known.join(', ')}.`;
-  return { code: 'unknown-field', path: place.path ?? (place.field === '' ? null : (place.field.split('.')[0] ?? null)), message: `Unknown field ${names} in ${inField}. ${takes}` };
+  return {
+    code: 'unknown-field',
+    path: place.path ?? (place.field === '' ? null : (place.field.split('.')[0] ?? null)),
+    message: `Unknown field ${names} in ${inField}. ${takes}`,
+  };
 }
 
 function unknownKind({ path, value }: Place): Finding {
@@ -111,7 +128,10 @@ function unknownKind({ path, value }: Place): Finding {
 
 function fieldMessage(issue: Issue, { field, kind, value, path }: Place): string {
   const leaf = field.split('.').at(-1) ?? '';
-  if (field === '') return issue.code === 'custom' && kind !== null ? `A ${kind}: ${issue.message}.` : `${path === null ? 'The document' : 'The step'} must be a JSON object.`;
+  if (field === '')
+    return issue.code === 'custom' && kind !== null
+      ? `A ${kind}: ${issue.message}.`
+      : `${path === null ? 'The document' : 'The step'} must be a JSON object.`;
   const given = value === undefined ? `${field} is missing` : `${field} is ${shown(value)}, which is not accepted`;
   return `${given}. It takes ${accepted[leaf] ?? describe(issue)}.`;
 }
@@ -129,7 +149,9 @@ function describe(issue: Issue): string {
     case 'invalid_value':
       return issue.values.map((entry) => JSON.stringify(entry)).join(', ');
     case 'too_small':
-      return issue.origin === 'string' ? 'a text that is not empty' : `a number ${issue.inclusive === true ? 'from' : 'above'} ${issue.minimum}`;
+      return issue.origin === 'string'
+        ? 'a text that is not empty'
+        : `a number ${issue.inclusive === true ? 'from' : 'above'} ${issue.minimum}`;
     case 'too_big':
       return issue.origin === 'string' ? `at most ${issue.maximum} characters` : `a number up to ${issue.maximum}`;
     default:

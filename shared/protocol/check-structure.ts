@@ -30,13 +30,28 @@ export function nestsTooDeep(document: ProtocolDocument): boolean {
 
 function repeatFindings(step: RepeatStep, path: string, { depth, rig }: { depth: number; rig: RigDocument }): Finding[] {
   const findings: Finding[] = [];
-  if (depth === greatestNesting) findings.push({ code: 'nested-too-deep', path, message: `Repeats nest at most ${greatestNesting} deep, and this one stands inside ${depth} others. Take it out of one of them.` });
-  if (step.steps.length === 0) findings.push({ code: 'no-steps', path, message: 'The repeat holds no steps. Put at least one into it, or remove it.' });
+  if (depth === greatestNesting)
+    findings.push({
+      code: 'nested-too-deep',
+      path,
+      message: `Repeats nest at most ${greatestNesting} deep, and this one stands inside ${depth} others. Take it out of one of them.`,
+    });
+  if (step.steps.length === 0)
+    findings.push({ code: 'no-steps', path, message: 'The repeat holds no steps. Put at least one into it, or remove it.' });
   else if (step.until !== undefined && 'localTime' in step.until && depth < greatestNesting && leastDurationS(step.steps, rig) === 0) {
-    findings.push({ code: 'endless-repeat', path, message: 'The steps in this repeat may take no time at all, so it could go round without end. Put a dwell or a settle into it.' });
+    findings.push({
+      code: 'endless-repeat',
+      path,
+      message: 'The steps in this repeat may take no time at all, so it could go round without end. Put a dwell or a settle into it.',
+    });
   }
   const needsAtMost = step.counting === 'good' || (step.until !== undefined && 'relativeStatisticalU' in step.until);
-  if (needsAtMost && step.atMost === undefined) findings.push({ code: 'field-missing', path, message: 'atMost is missing: without it the number of passes has no bound. It takes a whole number from 1.' });
+  if (needsAtMost && step.atMost === undefined)
+    findings.push({
+      code: 'field-missing',
+      path,
+      message: 'atMost is missing: without it the number of passes has no bound. It takes a whole number from 1.',
+    });
   return findings;
 }
 
@@ -56,15 +71,21 @@ function settleMessages(step: SettleStep): string[] {
 
 function waitMessages(step: WaitStep): string[] {
   if (!('localTime' in step.until)) return [];
-  return given(step, ['atMost_s', 'otherwise']).map((name) => `${name} goes with a wait for a channel and has no effect beside localTime. Leave it out; ifPast says what to do when the time is past.`);
+  return given(step, ['atMost_s', 'otherwise']).map(
+    (name) =>
+      `${name} goes with a wait for a channel and has no effect beside localTime. Leave it out; ifPast says what to do when the time is past.`,
+  );
 }
 
 function repeatMessages(step: RepeatStep): string[] {
   const byU = step.until !== undefined && 'relativeStatisticalU' in step.until;
   const messages: string[] = [];
-  if (step.atLeast !== undefined && !byU) messages.push('atLeast goes with until relativeStatisticalU and has no effect here. Leave it out.');
-  if (step.atMost !== undefined && !byU && step.counting !== 'good') messages.push('atMost goes with until relativeStatisticalU or with counting "good" and has no effect here. Leave it out.');
-  if (step.counting === 'good' && step.times === undefined) messages.push('counting "good" counts towards times, which is not given. Leave it out, or give times.');
+  if (step.atLeast !== undefined && !byU)
+    messages.push('atLeast goes with until relativeStatisticalU and has no effect here. Leave it out.');
+  if (step.atMost !== undefined && !byU && step.counting !== 'good')
+    messages.push('atMost goes with until relativeStatisticalU or with counting "good" and has no effect here. Leave it out.');
+  if (step.counting === 'good' && step.times === undefined)
+    messages.push('counting "good" counts towards times, which is not given. Leave it out, or give times.');
   return messages;
 }
 
@@ -74,7 +95,13 @@ function countFindings(document: ProtocolDocument, rig: RigDocument): Finding[] 
   if (total <= greatestStepCount) return [];
   const largest = counts.reduce((a, b) => (b.count > a.count ? b : a));
   const amount = total < 1e9 ? `up to ${total.toLocaleString('en-GB')}` : 'more than a thousand million';
-  return [{ code: 'too-many-steps', path: largest.path, message: `The protocol would execute ${amount} steps; at most 10,000 are accepted. Lower the number of passes here.` }];
+  return [
+    {
+      code: 'too-many-steps',
+      path: largest.path,
+      message: `The protocol would execute ${amount} steps; at most 10,000 are accepted. Lower the number of passes here.`,
+    },
+  ];
 }
 
 /** Greatest number of executed steps. */

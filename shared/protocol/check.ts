@@ -35,10 +35,17 @@ export function checkDocumentText(text: string): { document: ProtocolDocument | 
 /** Parses JSON (a byte order mark is passed over); what is no JSON gives a finding with line and column instead of an exception. */
 export function parseJson(text: string): { value: unknown } | { finding: Finding } {
   if (text.length > greatestTextLength) {
-    return { finding: { code: 'too-large', path: null, message: `The text has ${text.length} characters. At most ${greatestTextLength} are read.` } };
+    return {
+      finding: {
+        code: 'too-large',
+        path: null,
+        message: `The text has ${text.length} characters. At most ${greatestTextLength} are read.`,
+      },
+    };
   }
   const plain = text.startsWith('\uFEFF') ? text.slice(1) : text;
   const error = locateJsonError(plain);
-  if (error !== null) return { finding: { code: 'not-json', path: null, message: `Line ${error.line}, column ${error.column}: ${error.message}` } };
+  if (error !== null)
+    return { finding: { code: 'not-json', path: null, message: `Line ${error.line}, column ${error.column}: ${error.message}` } };
   return { value: JSON.parse(plain) };
 }

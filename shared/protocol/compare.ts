@@ -60,7 +60,8 @@ interface Row {
   path: string;
 }
 
-const rowsOf = (steps: readonly Step[], prefix: string): Row[] => steps.map((step, index) => ({ step, path: `${prefix}${index + 1}.${step.kind}` }));
+const rowsOf = (steps: readonly Step[], prefix: string): Row[] =>
+  steps.map((step, index) => ({ step, path: `${prefix}${index + 1}.${step.kind}` }));
 
 function listDifferences(before: readonly Step[], after: readonly Step[], prefix: { before: string; after: string }): Difference[] {
   const left = rowsOf(before, prefix.before);
@@ -79,7 +80,8 @@ function commonPairs(before: readonly Step[], after: readonly Step[]): (readonly
   let start = 0;
   while (start < before.length && start < after.length && same(before[start], after[start])) start += 1;
   let end = 0;
-  while (end < before.length - start && end < after.length - start && same(before[before.length - 1 - end], after[after.length - 1 - end])) end += 1;
+  while (end < before.length - start && end < after.length - start && same(before[before.length - 1 - end], after[after.length - 1 - end]))
+    end += 1;
   const head = Array.from({ length: start }, (_, index) => [index, index] as const);
   const tail = Array.from({ length: end }, (_, index) => [before.length - end + index, after.length - end + index] as const);
   const middle = matched(before.slice(start, before.length - end), after.slice(start, after.length - end));
@@ -97,7 +99,7 @@ function matched(before: readonly Step[], after: readonly Step[]): (readonly [nu
     }
   }
   const pairs: (readonly [number, number])[] = [];
-  for (let i = 0, j = 0; i < before.length && j < after.length; ) {
+  for (let i = 0, j = 0; i < before.length && j < after.length;) {
     if (alike[i]?.[j] === true) pairs.push([i++, j++] as const);
     else if (at(i + 1, j) >= at(i, j + 1)) i += 1;
     else j += 1;
@@ -121,11 +123,21 @@ function between(left: readonly Row[], right: readonly Row[]): Difference[] {
   return [...differences, ...right.slice(next).map(added)];
 }
 
-const added = (row: Row): Difference => ({ kind: 'added', pathBefore: null, pathAfter: row.path, field: '', before: undefined, after: row.step });
+const added = (row: Row): Difference => ({
+  kind: 'added',
+  pathBefore: null,
+  pathAfter: row.path,
+  field: '',
+  before: undefined,
+  after: row.step,
+});
 
 function stepDifferences(left: Row, right: Row): Difference[] {
   const fields = stepFields[left.step.kind].filter((field) => field !== 'steps');
   const own = fieldDifferences(left.step, right.step, { fields, paths: { before: left.path, after: right.path } });
   if (left.step.kind !== 'repeat') return own;
-  return [...own, ...listDifferences(left.step.steps, (right.step as RepeatStep).steps, { before: `${left.path}.`, after: `${right.path}.` })];
+  return [
+    ...own,
+    ...listDifferences(left.step.steps, (right.step as RepeatStep).steps, { before: `${left.path}.`, after: `${right.path}.` }),
+  ];
 }

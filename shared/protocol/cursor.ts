@@ -51,7 +51,11 @@ export function beginCursor(): CursorState {
  * is a call whose cursor is dropped.
  * @throws RangeError beyond 10,000 executed steps, and for a repeat that goes round without a step.
  */
-export function advanceCursor(plan: CursorPlan, cursor: CursorState, moment: CursorMoment): { item: PlannedItem | null; cursor: CursorState } {
+export function advanceCursor(
+  plan: CursorPlan,
+  cursor: CursorState,
+  moment: CursorMoment,
+): { item: PlannedItem | null; cursor: CursorState } {
   const frames = cursor.frames.map((frame) => ({ ...frame }));
   for (let decisions = 0; decisions <= greatestStepCount; decisions += 1) {
     const lists = listsOf(plan.protocol.steps, frames);

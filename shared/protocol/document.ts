@@ -26,14 +26,30 @@ const swingSchema = z.strictObject({
 
 const exactlyOne = (keys: readonly string[]) => (step: Record<string, unknown>, context: z.RefinementCtx) => {
   const given = keys.filter((key) => step[key] !== undefined);
-  if (given.length !== 1) context.addIssue({ code: 'custom', message: `exactly one of ${keys.join(', ')} is needed, got ${given.length === 0 ? 'none' : given.join(' and ')}` });
+  if (given.length !== 1)
+    context.addIssue({
+      code: 'custom',
+      message: `exactly one of ${keys.join(', ')} is needed, got ${given.length === 0 ? 'none' : given.join(' and ')}`,
+    });
 };
 
 const dwellSchema = z
-  .strictObject({ kind: z.literal('dwell'), for_s: positive.optional(), periods: positive.optional(), beat_periods: positive.optional(), ...label })
+  .strictObject({
+    kind: z.literal('dwell'),
+    for_s: positive.optional(),
+    periods: positive.optional(),
+    beat_periods: positive.optional(),
+    ...label,
+  })
   .superRefine(exactlyOne(['for_s', 'periods', 'beat_periods']));
 
-const kickSchema = z.strictObject({ kind: z.literal('kick'), amplitude_urad: positive, to: targetSchema.optional(), periods: positive.optional(), ...label });
+const kickSchema = z.strictObject({
+  kind: z.literal('kick'),
+  amplitude_urad: positive,
+  to: targetSchema.optional(),
+  periods: positive.optional(),
+  ...label,
+});
 
 const otherwise = z.enum(['hold', 'continue', 'stop']);
 
@@ -43,7 +59,10 @@ const settleSchema = z
     for_s: positive.optional(),
     calmWhen: z
       .strictObject({ amplitude_urad: positive.optional(), drift_urad_per_h: positive.optional(), window_s: positive })
-      .refine((calm) => calm.amplitude_urad !== undefined || calm.drift_urad_per_h !== undefined, 'amplitude_urad or drift_urad_per_h is needed')
+      .refine(
+        (calm) => calm.amplitude_urad !== undefined || calm.drift_urad_per_h !== undefined,
+        'amplitude_urad or drift_urad_per_h is needed',
+      )
       .optional(),
     atMost_s: positive.optional(),
     otherwise: otherwise.optional(),
@@ -53,7 +72,12 @@ const settleSchema = z
 
 const untilTimeSchema = z.strictObject({ localTime, ifPast: z.enum(['continue', 'hold', 'next day']).optional() });
 const untilChannelSchema = z
-  .strictObject({ channel: z.string().min(1), below: z.number().optional(), slopeBelow_per_h: positive.optional(), for_s: positive.optional() })
+  .strictObject({
+    channel: z.string().min(1),
+    below: z.number().optional(),
+    slopeBelow_per_h: positive.optional(),
+    for_s: positive.optional(),
+  })
   .superRefine(exactlyOne(['below', 'slopeBelow_per_h']));
 
 const waitSchema = z.strictObject({
@@ -77,11 +101,20 @@ const proofSchema = z.strictObject({
 });
 
 const markSchema = z.strictObject({ kind: z.literal('mark'), label: z.string().min(1).max(200), frame: z.boolean().optional() });
-const promptSchema = z.strictObject({ kind: z.literal('prompt'), text: z.string().min(1), atMost_s: positive.optional(), otherwise: z.enum(['hold', 'stop']).optional(), ...label });
+const promptSchema = z.strictObject({
+  kind: z.literal('prompt'),
+  text: z.string().min(1),
+  atMost_s: positive.optional(),
+  otherwise: z.enum(['hold', 'stop']).optional(),
+  ...label,
+});
 const rotateSchema = z.strictObject({
   kind: z.literal('rotate'),
   period_s: positive,
-  turns: z.number().int().refine((turns) => turns !== 0, 'at least one turn'),
+  turns: z
+    .number()
+    .int()
+    .refine((turns) => turns !== 0, 'at least one turn'),
   ...label,
 });
 
@@ -158,13 +191,21 @@ export type RepeatStep = {
   steps: Step[];
   label?: string | undefined;
 };
-export type Step = HomeStep | SwingStep | DwellStep | KickStep | SettleStep | WaitStep | ProofStep | MarkStep | PromptStep | RotateStep | RepeatStep;
+export type Step =
+  HomeStep | SwingStep | DwellStep | KickStep | SettleStep | WaitStep | ProofStep | MarkStep | PromptStep | RotateStep | RepeatStep;
 export type StepKind = Step['kind'];
 
 const goodWhenSchema = z.strictObject({
   residual_urad: positive.optional(),
   channels: z
-    .array(z.strictObject({ channel: z.string().min(1), below: z.number().optional(), above: z.number().optional(), slopeBelow_per_h: positive.optional() }))
+    .array(
+      z.strictObject({
+        channel: z.string().min(1),
+        below: z.number().optional(),
+        above: z.number().optional(),
+        slopeBelow_per_h: positive.optional(),
+      }),
+    )
     .optional(),
 });
 

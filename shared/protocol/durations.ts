@@ -26,7 +26,8 @@ export interface SwingMove extends ResolvedTarget {
 
 /** The rig's motion. @throws UnplayableStep where the rig document has none. */
 export function motionOf(rig: RigDocument): RigMotion {
-  if (rig.motion === undefined) throw new UnplayableStep('motion-missing', 'The rig document has no motion section, so nothing can be moved or planned.');
+  if (rig.motion === undefined)
+    throw new UnplayableStep('motion-missing', 'The rig document has no motion section, so nothing can be moved or planned.');
   return rig.motion;
 }
 
@@ -34,7 +35,11 @@ export function motionOf(rig: RigDocument): RigMotion {
  * The move of a plain swing from the angle `fromDeg` (deg) at the rig's greatest speed and acceleration, or at the step's own.
  * @throws UnplayableStep for a station the rig does not have, or without `motion`.
  */
-export function swingMove(step: Pick<SwingStep, 'to' | 'speed_deg_s' | 'acceleration_deg_s2'>, rig: RigDocument, fromDeg: number): SwingMove {
+export function swingMove(
+  step: Pick<SwingStep, 'to' | 'speed_deg_s' | 'acceleration_deg_s2'>,
+  rig: RigDocument,
+  fromDeg: number,
+): SwingMove {
   const motion = motionOf(rig);
   const target = resolveTarget(rig, step.to);
   if (target === null) throw new UnplayableStep('unknown-station', `The rig has no station "${String(step.to)}".`);
@@ -70,7 +75,8 @@ export function homeDurationS(rig: RigDocument, fromDeg: number): number {
   const overshootDeg = (speedAtEdge * speedAtEdge) / (2 * acceleration);
   const stoppedDeg = covered ? overshootDeg : -(stepDeg + overshootDeg);
   const belowDeg = -(Math.abs(stoppedDeg) + homeClearanceSteps * stepDeg);
-  const legS = (from: number, to: number) => trapezoid({ fromDeg: from, toDeg: to, speedDegS: speed, accelerationDegS2: acceleration }).durationS;
+  const legS = (from: number, to: number) =>
+    trapezoid({ fromDeg: from, toDeg: to, speedDegS: speed, accelerationDegS2: acceleration }).durationS;
   return searchS + speedAtEdge / acceleration + legS(stoppedDeg, belowDeg) + legS(belowDeg, 0);
 }
 
@@ -95,7 +101,8 @@ export interface DwellBegin {
 export function dwellEndUtcMs(step: DwellStep, rig: RigDocument, begin: DwellBegin): number {
   if (step.for_s !== undefined) return begin.startUtcMs + step.for_s * 1000;
   if (step.periods !== undefined) return begin.startUtcMs + step.periods * periodOf(rig) * 1000;
-  if (begin.swingStartUtcMs === null) throw new UnplayableStep('beat-needs-swing', 'A dwell with beat_periods must directly follow a swing.');
+  if (begin.swingStartUtcMs === null)
+    throw new UnplayableStep('beat-needs-swing', 'A dwell with beat_periods must directly follow a swing.');
   return Math.max(begin.startUtcMs, begin.swingStartUtcMs + (step.beat_periods ?? 0) * periodOf(rig) * 1000);
 }
 

@@ -23,10 +23,15 @@ const shifted = (path: StepPath, by: number): StepPath => [...parentOf(path), po
 function withList(steps: readonly Step[], parent: StepPath, change: Lists): Step[] {
   const [first, ...rest] = parent;
   if (first === undefined) return [...change(steps)];
-  return steps.map((step, index) => (index === first - 1 && step.kind === 'repeat' ? { ...step, steps: withList(step.steps, rest, change) } : step));
+  return steps.map((step, index) =>
+    index === first - 1 && step.kind === 'repeat' ? { ...step, steps: withList(step.steps, rest, change) } : step,
+  );
 }
 
-const changed = (document: ProtocolDocument, parent: StepPath, change: Lists): ProtocolDocument => ({ ...document, steps: withList(document.steps, parent, change) });
+const changed = (document: ProtocolDocument, parent: StepPath, change: Lists): ProtocolDocument => ({
+  ...document,
+  steps: withList(document.steps, parent, change),
+});
 
 const spliced = (steps: readonly Step[], from: number, { remove, put }: { remove: number; put: readonly Step[] }): Step[] => [
   ...steps.slice(0, from - 1),
@@ -115,13 +120,20 @@ function afterRemoval(to: StepPath, removed: StepPath): StepPath {
 }
 
 /** Puts the step and the `count − 1` after it into a new repeat in their place; the repeat is in hand. */
-export function nestInRepeat(document: ProtocolDocument, path: StepPath, options: { count?: number; repeat?: Omit<RepeatStep, 'kind' | 'steps'> } = {}): Edited {
+export function nestInRepeat(
+  document: ProtocolDocument,
+  path: StepPath,
+  options: { count?: number; repeat?: Omit<RepeatStep, 'kind' | 'steps'> } = {},
+): Edited {
   const list = listAt(document, parentOf(path));
   const position = positionOf(path);
   const inner = list?.slice(position - 1, position - 1 + (options.count ?? 1)) ?? [];
   const repeat: RepeatStep = { kind: 'repeat', ...(options.repeat ?? { times: 2 }), steps: inner };
   if (position < 1 || inner.length === 0 || !fits(repeat, path.length - 1)) return { document, path };
-  return { document: changed(document, parentOf(path), (steps) => spliced(steps, position, { remove: inner.length, put: [repeat] })), path };
+  return {
+    document: changed(document, parentOf(path), (steps) => spliced(steps, position, { remove: inner.length, put: [repeat] })),
+    path,
+  };
 }
 
 /**
@@ -141,7 +153,10 @@ export function unnest(document: ProtocolDocument, path: StepPath): Edited {
 }
 
 /** Changes fields of the document outside its steps; a value of undefined takes the field away. */
-export function changeDocument(document: ProtocolDocument, change: Partial<Omit<ProtocolDocument, 'formatVersion' | 'steps'>>): ProtocolDocument {
+export function changeDocument(
+  document: ProtocolDocument,
+  change: Partial<Omit<ProtocolDocument, 'formatVersion' | 'steps'>>,
+): ProtocolDocument {
   const merged = { ...document, ...change };
   return Object.fromEntries(Object.entries(merged).filter(([, value]) => value !== undefined)) as ProtocolDocument;
 }

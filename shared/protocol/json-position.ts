@@ -88,7 +88,8 @@ class Reader {
     }
     for (;;) {
       this.space();
-      if (this.text[this.at] === end) throw new Refusal(this.at, `Found "${end}" after a comma where ${expected} is expected. Remove the comma.`);
+      if (this.text[this.at] === end)
+        throw new Refusal(this.at, `Found "${end}" after a comma where ${expected} is expected. Remove the comma.`);
       if (end === '}' && this.text[this.at] !== '"') throw new Refusal(this.at, `${this.found()} where ${expected} is expected.`);
       member();
       this.space();
@@ -124,7 +125,11 @@ class Reader {
   private word(): void {
     const token = /(?:true|false|null|-?(?:0|[1-9]\d*)(?:\.\d+)?(?:[eE][+-]?\d+)?)(?![\w.+-])/y;
     token.lastIndex = this.at;
-    if (token.exec(this.text) === null) throw new Refusal(this.at, `${this.found()} where a value is expected: an object, a list, a text in double quotes, a number, true, false or null.`);
+    if (token.exec(this.text) === null)
+      throw new Refusal(
+        this.at,
+        `${this.found()} where a value is expected: an object, a list, a text in double quotes, a number, true, false or null.`,
+      );
     this.at = token.lastIndex;
   }
 }

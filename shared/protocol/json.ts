@@ -53,8 +53,10 @@ export function protocolJsonSchema(): JsonObject {
       const properties = jsonSchema.properties as Record<string, JsonObject> | undefined;
       const kind = properties?.['kind']?.['const'];
       if (typeof kind === 'string') annotate(jsonSchema, kind as StepKind, properties ?? {});
-      if (properties?.['slopeBelow_per_h'] !== undefined && properties['for_s'] !== undefined) Object.assign(jsonSchema, oneOf(['below', 'slopeBelow_per_h']));
-      if (properties?.['window_s'] !== undefined) Object.assign(jsonSchema, { anyOf: [{ required: ['amplitude_urad'] }, { required: ['drift_urad_per_h'] }] });
+      if (properties?.['slopeBelow_per_h'] !== undefined && properties['for_s'] !== undefined)
+        Object.assign(jsonSchema, oneOf(['below', 'slopeBelow_per_h']));
+      if (properties?.['window_s'] !== undefined)
+        Object.assign(jsonSchema, { anyOf: [{ required: ['amplitude_urad'] }, { required: ['drift_urad_per_h'] }] });
       if (properties?.['turns'] !== undefined) Object.assign(properties['turns'] ?? {}, { not: { const: 0 } });
     },
   }) as JsonObject;

@@ -20,8 +20,10 @@ export function pathObstacles(motion: RigMotion, fromDeg: number, toDeg: number)
   const low = Math.min(fromDeg, toDeg);
   const high = Math.max(fromDeg, toDeg);
   const obstacles: PathObstacle[] = [];
-  if (low < motion.minDeg) obstacles.push({ code: 'out-of-limits', reason: `${degrees(low)} lies below the limit motion.minDeg ${degrees(motion.minDeg)}` });
-  if (high > motion.maxDeg) obstacles.push({ code: 'out-of-limits', reason: `${degrees(high)} lies above the limit motion.maxDeg ${degrees(motion.maxDeg)}` });
+  if (low < motion.minDeg)
+    obstacles.push({ code: 'out-of-limits', reason: `${degrees(low)} lies below the limit motion.minDeg ${degrees(motion.minDeg)}` });
+  if (high > motion.maxDeg)
+    obstacles.push({ code: 'out-of-limits', reason: `${degrees(high)} lies above the limit motion.maxDeg ${degrees(motion.maxDeg)}` });
   for (const arc of motion.keepOut ?? []) {
     const met = imageMet(arc, low, high);
     if (met !== null) obstacles.push({ code: 'keep-out', reason: arcReason(arc, met) });
@@ -29,10 +31,13 @@ export function pathObstacles(motion: RigMotion, fromDeg: number, toDeg: number)
   return obstacles;
 }
 
+/** Closer than this (deg) is touching: decimal fractions of a degree do not subtract exactly. */
+const touchDeg = 1e-9;
+
 /** The image of the arc, by a multiple of 180 deg, that the interval meets; the arc itself before its images. */
 function imageMet([fromDeg, toDeg]: readonly [number, number], low: number, high: number): number | null {
-  const first = Math.ceil((low - toDeg) / 180);
-  const last = Math.floor((high - fromDeg) / 180);
+  const first = Math.ceil((low - toDeg - touchDeg) / 180);
+  const last = Math.floor((high - fromDeg + touchDeg) / 180);
   if (first > last) return null;
   if (first <= 0 && last >= 0) return 0;
   return (first > 0 ? first : last) * 180;

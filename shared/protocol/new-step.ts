@@ -33,5 +33,12 @@ export function newStep(kind: StepKind, rig: RigDocument): Step {
 
 /** The document of a protocol begun from nothing. */
 export function emptyDocument(name: string): ProtocolDocument {
-  return { formatVersion: 1, name, notes: '', onInterruption: 'hold', evaluation: { method: 'equilibrium', drift: 'aba', channel: 'deflection' }, steps: [] };
+  return {
+    formatVersion: 1,
+    name,
+    notes: '',
+    onInterruption: 'hold',
+    evaluation: { method: 'equilibrium', drift: 'aba', channel: 'deflection' },
+    steps: [],
+  };
 }

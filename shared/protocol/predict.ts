@@ -80,7 +80,11 @@ export interface PredictedDeflection {
  * angle at which the pendulum has no equilibrium.
  * @throws NotYetError for cylinders.
  */
-export function predictDeflection(rig: RigDocument, timeline: Pick<Timeline, 'items' | 'startUtcMs' | 'endUtcMs'>, points: number): PredictedDeflection | null {
+export function predictDeflection(
+  rig: RigDocument,
+  timeline: Pick<Timeline, 'items' | 'startUtcMs' | 'endUtcMs'>,
+  points: number,
+): PredictedDeflection | null {
   const pendulum = pendulumOf(rig);
   if (pendulum === null) return null;
   const segments = segmentsOf(pendulum, timeline);
@@ -93,7 +97,11 @@ export function predictDeflection(rig: RigDocument, timeline: Pick<Timeline, 'it
     const atMs = timeline.startUtcMs + ((timeline.endUtcMs - timeline.startUtcMs) * point) / Math.max(1, points - 1);
     let segment = segments[index];
     while (segment !== undefined && segment.endUtcMs <= atMs && index < segments.length - 1) {
-      state = carried(state, segment, { omega: segment.omega, gamma: pendulum.oscillator.gamma, seconds: (segment.endUtcMs - sinceMs) / 1000 });
+      state = carried(state, segment, {
+        omega: segment.omega,
+        gamma: pendulum.oscillator.gamma,
+        seconds: (segment.endUtcMs - sinceMs) / 1000,
+      });
       sinceMs = segment.endUtcMs;
       index += 1;
       segment = segments[index];
@@ -161,7 +169,12 @@ function addMove(item: TimelineItem, periodS: number, add: (untilMs: number, ang
   const move =
     item.speedDegS === undefined || item.accelerationDegS2 === undefined
       ? null
-      : trapezoid({ fromDeg: item.angleFromDeg, toDeg: item.angleToDeg, speedDegS: item.speedDegS, accelerationDegS2: item.accelerationDegS2 });
+      : trapezoid({
+          fromDeg: item.angleFromDeg,
+          toDeg: item.angleToDeg,
+          speedDegS: item.speedDegS,
+          accelerationDegS2: item.accelerationDegS2,
+        });
   for (let piece = 0; piece < pieces; piece += 1) {
     const fraction = (piece + 0.5) / pieces;
     const angleDeg = move?.angleDegAt(fraction * durationS) ?? item.angleFromDeg + fraction * (item.angleToDeg - item.angleFromDeg);

@@ -42,7 +42,10 @@ export function stateAfter(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZ
       return at(settleEndUtcMs(step, state.utcMs));
     case 'wait':
       if (!('localTime' in step.until)) return at(state.utcMs);
-      return at(waitUntilLocalTime({ localTime: step.until.localTime, timeZone, utcMs: state.utcMs, ifPast: step.until.ifPast ?? 'continue' }).endUtcMs);
+      return at(
+        waitUntilLocalTime({ localTime: step.until.localTime, timeZone, utcMs: state.utcMs, ifPast: step.until.ifPast ?? 'continue' })
+          .endUtcMs,
+      );
     default:
       return at(state.utcMs);
   }
@@ -63,7 +66,11 @@ export function stateAfterIfPossible(step: LeafStep, plan: Pick<CursorPlan, 'rig
 }
 
 /** Station at which the sources stand in a state: the target's own name after a swing to it, else the first one at that angle. */
-export function stationAfter(step: LeafStep, rig: RigDocument, after: { angleDeg: number; stationBefore: string; angleBeforeDeg: number }): string {
+export function stationAfter(
+  step: LeafStep,
+  rig: RigDocument,
+  after: { angleDeg: number; stationBefore: string; angleBeforeDeg: number },
+): string {
   if (step.kind === 'swing' && typeof step.to === 'string') return step.to;
   return after.angleDeg === after.angleBeforeDeg ? after.stationBefore : stationAt(rig, after.angleDeg);
 }

@@ -47,7 +47,10 @@ export interface VisitedStep {
 }
 
 /** Every step of the document in reading order, repeats before what they hold. */
-export function* walkSteps(steps: readonly Step[], around: { prefix: string; positions: StepPath } = { prefix: '', positions: [] }): Generator<VisitedStep> {
+export function* walkSteps(
+  steps: readonly Step[],
+  around: { prefix: string; positions: StepPath } = { prefix: '', positions: [] },
+): Generator<VisitedStep> {
   for (const [index, step] of steps.entries()) {
     const path = `${around.prefix}${index + 1}.${step.kind}`;
     const positions = [...around.positions, index + 1];

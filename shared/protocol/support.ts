@@ -16,19 +16,27 @@ export function isBuilt(kind: Step['kind']): boolean {
 
 /** Everything in the document that this version does not carry out, with the step's path and what can be used instead. */
 export function notYet(document: ProtocolDocument): Finding[] {
-  return [...documentNotYet(document), ...[...walkSteps(document.steps)].flatMap(({ step, path }) => stepNotYet(step).map((message) => finding(path, message)))];
+  return [
+    ...documentNotYet(document),
+    ...[...walkSteps(document.steps)].flatMap(({ step, path }) => stepNotYet(step).map((message) => finding(path, message))),
+  ];
 }
 
 const finding = (path: string | null, message: string): Finding => ({ code: 'not-yet', path, message });
 
 function documentNotYet({ goodWhen, evaluation }: ProtocolDocument): Finding[] {
   const findings: Finding[] = [];
-  if (goodWhen !== undefined) findings.push(finding('goodWhen', 'goodWhen is not built yet. Leave it out; exclusions can be made in the data afterwards.'));
+  if (goodWhen !== undefined)
+    findings.push(finding('goodWhen', 'goodWhen is not built yet. Leave it out; exclusions can be made in the data afterwards.'));
   const method = evaluation?.method ?? 'equilibrium';
   const drift = evaluation?.drift ?? 'aba';
-  if (method !== 'equilibrium') findings.push(finding('evaluation', `The evaluation method "${method}" is not built yet. Use "equilibrium".`));
+  if (method !== 'equilibrium')
+    findings.push(finding('evaluation', `The evaluation method "${method}" is not built yet. Use "equilibrium".`));
   if (drift !== 'aba') findings.push(finding('evaluation', `The drift removal "${drift}" is not built yet. Use "aba".`));
-  if (evaluation?.order !== undefined) findings.push(finding('evaluation', 'evaluation.order belongs to the drift removal "polynomial", which is not built yet. Leave it out.'));
+  if (evaluation?.order !== undefined)
+    findings.push(
+      finding('evaluation', 'evaluation.order belongs to the drift removal "polynomial", which is not built yet. Leave it out.'),
+    );
   return findings;
 }
 
@@ -58,7 +66,9 @@ function settleNotYet({ calmWhen }: SettleStep): string[] {
 }
 
 function waitNotYet({ until }: WaitStep): string[] {
-  return 'localTime' in until ? [] : [`Waiting for the channel "${until.channel}" is not built yet. Wait until a localTime, or settle for a fixed time.`];
+  return 'localTime' in until
+    ? []
+    : [`Waiting for the channel "${until.channel}" is not built yet. Wait until a localTime, or settle for a fixed time.`];
 }
 
 function repeatNotYet({ until, counting, order }: RepeatStep): string[] {

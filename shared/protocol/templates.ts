@@ -31,7 +31,8 @@ function document(name: string, parts: Pick<ProtocolDocument, 'notes' | 'steps'>
   };
 }
 
-const atClear = (rig: RigDocument): Partial<ProtocolDocument> => (rig.stations['clear'] === undefined ? {} : { atEnd: { station: 'clear', drivers: 'keep' } });
+const atClear = (rig: RigDocument): Partial<ProtocolDocument> =>
+  rig.stations['clear'] === undefined ? {} : { atEnd: { station: 'clear', drivers: 'keep' } };
 
 const asItIs = (rig: RigDocument): RigDocument => rig;
 
@@ -46,7 +47,8 @@ const overnight = (rig: RigDocument, name: string, notes: string): ProtocolDocum
 const nearFar: Template = {
   id: 'near-far',
   name: 'Overnight reversals',
-  summary: 'The standard night: after a first pair, 16 pairs of a far and a near dwell at a beat of two periods, then the sources turn clear.',
+  summary:
+    'The standard night: after a first pair, 16 pairs of a far and a near dwell at a beat of two periods, then the sources turn clear.',
   make: (rig) => overnight(rig, 'Overnight reversals', ''),
   rigFor: asItIs,
 };
@@ -55,14 +57,19 @@ const proof: Template = {
   id: 'proof',
   name: 'Proof hour',
   summary: 'Three reversals after any change to the rig and before a campaign: sign, size and period of the signal show whether it works.',
-  make: () => document('Proof hour', { notes: '', steps: [{ kind: 'home' }, swing('near'), ...reversal('far'), ...reversal('near'), ...reversal('far')] }),
+  make: () =>
+    document('Proof hour', {
+      notes: '',
+      steps: [{ kind: 'home' }, swing('near'), ...reversal('far'), ...reversal('near'), ...reversal('far')],
+    }),
   rigFor: asItIs,
 };
 
 const scan: Template = {
   id: 'scan',
   name: 'Torque scan',
-  summary: 'Dwells at a row of angles, up and down again: where the torque is zero and where it is greatest. For a new rig, or when the table was moved.',
+  summary:
+    'Dwells at a row of angles, up and down again: where the torque is zero and where it is greatest. For a new rig, or when the table was moved.',
   make: (rig) => {
     const up = scanAngles(rig);
     return document('Torque scan', { notes: '', steps: [{ kind: 'home' }, ...[...up, ...up.slice(0, -1).reverse()].flatMap(reversal)] });
@@ -86,11 +93,17 @@ function scanAngles(rig: RigDocument): number[] {
 const still: Template = {
   id: 'still',
   name: 'Still night',
-  summary: 'An hour to settle and 32 dwells of two periods without any motion: the noise and the drift of the rig in this room, before the first measurement of G.',
+  summary:
+    'An hour to settle and 32 dwells of two periods without any motion: the noise and the drift of the rig in this room, before the first measurement of G.',
   make: () =>
     document('Still night', {
       notes: '',
-      steps: [{ kind: 'home' }, swing('near'), { kind: 'settle', for_s: 3600 }, { kind: 'repeat', times: 32, steps: [{ kind: 'dwell', periods: 2 }] }],
+      steps: [
+        { kind: 'home' },
+        swing('near'),
+        { kind: 'settle', for_s: 3600 },
+        { kind: 'repeat', times: 32, steps: [{ kind: 'dwell', periods: 2 }] },
+      ],
     }),
   rigFor: asItIs,
 };
@@ -98,12 +111,17 @@ const still: Template = {
 const fourStation: Template = {
   id: 'four-station',
   name: 'Four stations, weekend',
-  summary: 'Near and far, then both turned by 180°, 23 times: tilt, magnetism and unequal balls change sign with the turn, gravity does not. For a rig that turns freely.',
+  summary:
+    'Near and far, then both turned by 180°, 23 times: tilt, magnetism and unequal balls change sign with the turn, gravity does not. For a rig that turns freely.',
   make: (rig) => {
     const turn = (from: string, to: string): Step[] => [swing(to), { kind: 'settle', for_s: restOfBeatS(rig, from, to) }];
     const back: Step[] = [...reversal('farBack'), ...reversal('nearBack')];
     const block: Step[] = [...pair, ...pair, ...turn('near', 'nearBack'), ...back, ...back, ...turn('nearBack', 'near')];
-    return document('Four stations, weekend', { notes: '', ...atClear(rig), steps: [{ kind: 'home' }, swing('near'), ...pair, { kind: 'repeat', times: 23, steps: block }] });
+    return document('Four stations, weekend', {
+      notes: '',
+      ...atClear(rig),
+      steps: [{ kind: 'home' }, swing('near'), ...pair, { kind: 'repeat', times: 23, steps: block }],
+    });
   },
   rigFor: asItIs,
 };
@@ -123,8 +141,10 @@ function restOfBeatS(rig: RigDocument, from: string, to: string): number {
 const nearFarShort: Template = {
   id: 'near-far-short',
   name: 'Short reversals',
-  summary: 'Six pairs of a far and a near dwell at a beat of two periods: a first value of G in under three hours, for demonstrations and rehearsals.',
-  make: () => document('Short reversals', { notes: '', steps: [{ kind: 'home' }, swing('near'), { kind: 'repeat', times: 6, steps: pair }] }),
+  summary:
+    'Six pairs of a far and a near dwell at a beat of two periods: a first value of G in under three hours, for demonstrations and rehearsals.',
+  make: () =>
+    document('Short reversals', { notes: '', steps: [{ kind: 'home' }, swing('near'), { kind: 'repeat', times: 6, steps: pair }] }),
   rigFor: asItIs,
 };
 
@@ -132,7 +152,12 @@ const emptyControl: Template = {
   id: 'empty-control',
   name: 'Empty control',
   summary: 'The overnight reversals with nothing on the turntable: what remains of near minus far is not gravity of the sources.',
-  make: (rig) => overnight(rig, 'Empty control', 'Run this with the mass set "empty": the same steps as the overnight reversals, without the source masses.'),
+  make: (rig) =>
+    overnight(
+      rig,
+      'Empty control',
+      'Run this with the mass set "empty": the same steps as the overnight reversals, without the source masses.',
+    ),
   rigFor: withoutSources,
 };
 

@@ -53,7 +53,11 @@ export function planTimeline(plan: CursorPlan, start: { utcMs: number; angleDeg:
   }
 }
 
-function tryAdvance(plan: CursorPlan, cursor: ReturnType<typeof beginCursor>, state: PlanState): ReturnType<typeof advanceCursor> | 'endless' {
+function tryAdvance(
+  plan: CursorPlan,
+  cursor: ReturnType<typeof beginCursor>,
+  state: PlanState,
+): ReturnType<typeof advanceCursor> | 'endless' {
   try {
     return advanceCursor(plan, cursor, state);
   } catch (error) {
@@ -62,7 +66,11 @@ function tryAdvance(plan: CursorPlan, cursor: ReturnType<typeof beginCursor>, st
   }
 }
 
-function timelineItem({ path, documentPath, step }: PlannedItem, rig: RigDocument, at: { before: PlanState; after: PlanState; station: string }): TimelineItem {
+function timelineItem(
+  { path, documentPath, step }: PlannedItem,
+  rig: RigDocument,
+  at: { before: PlanState; after: PlanState; station: string },
+): TimelineItem {
   const item: TimelineItem = {
     path,
     documentPath,
@@ -84,5 +92,12 @@ function timelineItem({ path, documentPath, step }: PlannedItem, rig: RigDocumen
 
 function finish(items: TimelineItem[], startUtcMs: number, truncated: boolean): Timeline {
   const endUtcMs = items.at(-1)?.endUtcMs ?? startUtcMs;
-  return { items, startUtcMs, endUtcMs, durationS: (endUtcMs - startUtcMs) / 1000, dwells: items.filter(({ kind }) => kind === 'dwell').length, truncated };
+  return {
+    items,
+    startUtcMs,
+    endUtcMs,
+    durationS: (endUtcMs - startUtcMs) / 1000,
+    dwells: items.filter(({ kind }) => kind === 'dwell').length,
+    truncated,
+  };
 }

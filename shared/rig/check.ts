@@ -11,6 +11,10 @@ export function checkRigText(text: string): { rig: RigDocument | null; findings:
   if ('finding' in parsed) return { rig: null, findings: [parsed.finding] };
   const read = rigDocumentSchema.safeParse(parsed.value);
   if (read.success) return { rig: read.data, findings: [] };
-  const findings = read.error.issues.map(({ path, message }) => ({ code: 'invalid-field', path: path.length === 0 ? null : path.map(String).join('.'), message }));
+  const findings = read.error.issues.map(({ path, message }) => ({
+    code: 'invalid-field',
+    path: path.length === 0 ? null : path.map(String).join('.'),
+    message,
+  }));
   return { rig: null, findings };
 }

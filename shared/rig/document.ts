@@ -87,9 +87,11 @@ const motionSchema = z
     safeWhenFree: z.boolean().optional(),
   })
   .superRefine((motion, context) => {
-    if (motion.minDeg >= motion.maxDeg) context.addIssue({ code: 'custom', path: ['minDeg'], message: 'motion.minDeg must be below motion.maxDeg' });
+    if (motion.minDeg >= motion.maxDeg)
+      context.addIssue({ code: 'custom', path: ['minDeg'], message: 'motion.minDeg must be below motion.maxDeg' });
     motion.keepOut?.forEach(([from, to], index) => {
-      if (from >= to) context.addIssue({ code: 'custom', path: ['keepOut', index], message: 'a keep-out arc runs from a smaller to a greater angle' });
+      if (from >= to)
+        context.addIssue({ code: 'custom', path: ['keepOut', index], message: 'a keep-out arc runs from a smaller to a greater angle' });
     });
   });
 

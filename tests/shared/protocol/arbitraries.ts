@@ -1,4 +1,4 @@
-import fc from 'fast-check';
+import * as fc from 'fast-check';
 import type { ProtocolDocument, Step } from '@/shared/protocol/document';
 
 /** Steps and documents that the wide demo rig can carry out, for property tests. */
@@ -38,7 +38,11 @@ export const steps: fc.Arbitrary<Step[]> = fc.array(stepOfDepth(3), { minLength:
 export const anyStep: fc.Arbitrary<Step> = stepOfDepth(2);
 
 export const documents: fc.Arbitrary<ProtocolDocument> = fc
-  .record({ name: fc.string({ minLength: 1, maxLength: 20 }), steps, atEnd: fc.option(fc.constant({ station: 'clear' }), { nil: undefined }) })
+  .record({
+    name: fc.string({ minLength: 1, maxLength: 20 }),
+    steps,
+    atEnd: fc.option(fc.constant({ station: 'clear' }), { nil: undefined }),
+  })
   .map(({ name, steps: body, atEnd }): ProtocolDocument => ({
     formatVersion: 1,
     name,

@@ -1,4 +1,4 @@
-import fc from 'fast-check';
+import * as fc from 'fast-check';
 import { advanceCursor, beginCursor, type CursorState, type PlannedItem } from '@/shared/protocol/cursor';
 import type { ProtocolDocument, Step } from '@/shared/protocol/document';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
@@ -33,11 +33,17 @@ test('executes the steps one after another and then is finished', () => {
 });
 
 test('counts passes from 1 in the path of the run and leaves them out of the path in the document', () => {
-  const items = run({ steps: [{ kind: 'home' }, { kind: 'repeat', times: 2, steps: [mark('a'), { kind: 'repeat', times: 2, steps: [mark('b')] }] }] });
+  const items = run({
+    steps: [{ kind: 'home' }, { kind: 'repeat', times: 2, steps: [mark('a'), { kind: 'repeat', times: 2, steps: [mark('b')] }] }],
+  });
   expect(items.map(({ path }) => path)).toEqual([
     '1.home',
-    '2.repeat[1].1.mark', '2.repeat[1].2.repeat[1].1.mark', '2.repeat[1].2.repeat[2].1.mark',
-    '2.repeat[2].1.mark', '2.repeat[2].2.repeat[1].1.mark', '2.repeat[2].2.repeat[2].1.mark',
+    '2.repeat[1].1.mark',
+    '2.repeat[1].2.repeat[1].1.mark',
+    '2.repeat[1].2.repeat[2].1.mark',
+    '2.repeat[2].1.mark',
+    '2.repeat[2].2.repeat[1].1.mark',
+    '2.repeat[2].2.repeat[2].1.mark',
   ]);
   expect(items.at(-1)?.documentPath).toBe('2.repeat.2.repeat.1.mark');
 });
@@ -46,7 +52,8 @@ test('what is executed equals an independent unrolling of the document', () => {
   fc.assert(
     fc.property(documents, (document) => {
       const expected = unrolled(document.steps).map(({ path, step }) => ({ path, step }));
-      if (document.atEnd?.station !== undefined) expected.push({ path: 'atEnd.swing', step: { kind: 'swing', to: document.atEnd.station } });
+      if (document.atEnd?.station !== undefined)
+        expected.push({ path: 'atEnd.swing', step: { kind: 'swing', to: document.atEnd.station } });
       expect(run(document).map(({ path, step }) => ({ path, step }))).toEqual(expected);
     }),
   );
@@ -111,7 +118,10 @@ describe('repeat until a local time', () => {
 
   test('the planned end of a pass counts moves from where the sources stand', () => {
     // 0 to 90 deg takes 90/6 + 3 = 18 s at 6 deg/s and 2 deg/s2, so the pass takes 18 + 42 = 60 s.
-    const pass: Step[] = [{ kind: 'swing', to: 'clear' }, { kind: 'dwell', for_s: 42 }];
+    const pass: Step[] = [
+      { kind: 'swing', to: 'clear' },
+      { kind: 'dwell', for_s: 42 },
+    ];
     expect(run({ steps: until('00:01', pass) }, { secondsPerStep: 60 })).toHaveLength(2);
     expect(run({ steps: until('00:01', [...pass, { kind: 'settle', for_s: 0.001 }]) })).toHaveLength(0);
   });

@@ -4,7 +4,11 @@ const at = (iso: string) => Date.parse(iso);
 const iso = (utcMs: number) => new Date(utcMs).toISOString().replace('.000Z', 'Z');
 
 describe('wait until a local time means the nearest occurrence', () => {
-  const wait = (now: string, localTime: string, ifPast: 'continue' | 'hold' | 'next day' = 'continue', timeZone = 'UTC') => {
+  const wait = (
+    now: string,
+    localTime: string,
+    { ifPast = 'continue', timeZone = 'UTC' }: { ifPast?: 'continue' | 'hold' | 'next day'; timeZone?: string } = {},
+  ) => {
     const { endUtcMs, past } = waitUntilLocalTime({ localTime, timeZone, utcMs: at(now), ifPast });
     return { end: iso(endUtcMs), past };
   };
@@ -25,17 +29,17 @@ describe('wait until a local time means the nearest occurrence', () => {
   });
 
   test('the very moment is neither past nor waited for', () => {
-    expect(wait('2031-03-13T22:00:00Z', '22:00', 'hold')).toEqual({ end: '2031-03-13T22:00:00Z', past: false });
+    expect(wait('2031-03-13T22:00:00Z', '22:00', { ifPast: 'hold' })).toEqual({ end: '2031-03-13T22:00:00Z', past: false });
   });
 
   test('next day waits for the occurrence after the one that is past', () => {
-    expect(wait('2031-03-13T23:10:00Z', '22:00', 'next day')).toEqual({ end: '2031-03-14T22:00:00Z', past: true });
-    expect(wait('2031-03-14T02:00:00Z', '22:00', 'next day')).toEqual({ end: '2031-03-14T22:00:00Z', past: true });
+    expect(wait('2031-03-13T23:10:00Z', '22:00', { ifPast: 'next day' })).toEqual({ end: '2031-03-14T22:00:00Z', past: true });
+    expect(wait('2031-03-14T02:00:00Z', '22:00', { ifPast: 'next day' })).toEqual({ end: '2031-03-14T22:00:00Z', past: true });
   });
 
   test('the time is that of the zone', () => {
-    expect(wait('2031-01-13T18:00:00Z', '22:00', 'continue', 'Asia/Kathmandu')).toEqual({ end: '2031-01-13T18:00:00Z', past: true });
-    expect(wait('2031-01-13T18:00:00Z', '22:00', 'continue', 'Europe/Oslo')).toEqual({ end: '2031-01-13T21:00:00Z', past: false });
+    expect(wait('2031-01-13T18:00:00Z', '22:00', { timeZone: 'Asia/Kathmandu' })).toEqual({ end: '2031-01-13T18:00:00Z', past: true });
+    expect(wait('2031-01-13T18:00:00Z', '22:00', { timeZone: 'Europe/Oslo' })).toEqual({ end: '2031-01-13T21:00:00Z', past: false });
   });
 });
 

@@ -1,0 +1,182 @@
+import { checkProtocol } from '@/shared/protocol/check';
+import type { ProtocolDocument, Step } from '@/shared/protocol/document';
+import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
+import type { RigDocument } from '@/shared/rig/document';
+
+const home: Step = { kind: 'home' };
+const near: Step = { kind: 'swing', to: 'near' };
+const far: Step = { kind: 'swing', to: 'far' };
+const dwell: Step = { kind: 'dwell', for_s: 600 };
+const beat: Step = { kind: 'dwell', beat_periods: 2 };
+const repeat = (times: number, ...steps: Step[]): Step => ({ kind: 'repeat', times, steps });
+const protocol = (steps: Step[], more: Partial<ProtocolDocument> = {}): ProtocolDocument => ({
+  formatVersion: 1,
+  name: 'Test',
+  steps,
+  ...more,
+});
+const check = (steps: unknown[], rig: RigDocument = demoRigWide) => checkProtocol({ formatVersion: 1, name: 'Test', steps }, rig);
+const places = (steps: unknown[], rig: RigDocument = demoRigWide) => check(steps, rig).map(({ code, path }) => `${code} ${path}`);
+const withMotion = (motion: Partial<NonNullable<RigDocument['motion']>>): RigDocument => ({
+  ...demoRigWide,
+  motion: { ...demoRigWide.motion, ...motion } as NonNullable<RigDocument['motion']>,
+});
+
+describe('stations', () => {
+  test('an unknown one is named, with those the rig has', () => {
+    const [finding] = check([home, { kind: 'swing', to: 'naer' }]);
+    expect(finding).toMatchObject({ code: 'unknown-station', path: '2.swing' });
+    expect(finding?.message).toContain('"naer"');
+    expect(finding?.message).toContain('near, far, clear, inline, across, nearBack, farBack');
+  });
+
+  test('names that every object has are no stations', () => {
+    expect(places([home, { kind: 'swing', to: 'constructor' }, { kind: 'swing', to: '__proto__' }])).toEqual([
+      'unknown-station 2.swing',
+      'unknown-station 3.swing',
+    ]);
+  });
+
+  test('the station at the end counts too', () => {
+    expect(checkProtocol(protocol([home, dwell], { atEnd: { station: 'parked' } }), demoRigWide)).toEqual([
+      expect.objectContaining({ code: 'unknown-station', path: 'atEnd' }),
+    ]);
+  });
+});
+
+describe('the path rule', () => {
+  const to = (angle_deg: number): Step => ({ kind: 'swing', to: { angle_deg } });
+
+  test('the limits themselves can be reached, beyond them is refused with the limit', () => {
+    expect(places([home, to(175), to(-175)])).toEqual([]);
+    const [finding] = check([home, to(175.01)]);
+    expect(finding).toMatchObject({ code: 'out-of-limits', path: '2.swing' });
+    expect(finding?.message).toContain('motion.maxDeg 175°');
+  });
+
+  test('nothing wraps: from −159.82 to 159.82 the path crosses everything between', () => {
+    const rig = withMotion({ keepOut: [[40, 60]] });
+    // Reached from home without meeting the arc or its images at −140…−120 and 220…240.
+    expect(places([home, to(-100)], rig)).toEqual([]);
+    expect(places([home, to(-100), to(100)], rig)).toEqual(['keep-out 3.swing']);
+  });
+
+  test('an arc that lies across the path is named', () => {
+    const [finding] = check([home, { kind: 'swing', to: 'clear' }], withMotion({ keepOut: [[40, 60]] }));
+    expect(finding).toMatchObject({ code: 'keep-out', path: '2.swing' });
+    expect(finding?.message).toContain('from 0° to 90°');
+    expect(finding?.message).toContain('40° to 60°');
+  });
+
+  test('its image by 180 degrees is met by the other source', () => {
+    const [finding] = check([home, { kind: 'swing', to: 'nearBack' }], withMotion({ keepOut: [[40, 60]] }));
+    expect(finding).toMatchObject({ code: 'keep-out', path: '2.swing' });
+    expect(finding?.message).toContain('−140° to −120°');
+    expect(places([home, to(100)], withMotion({ keepOut: [[-130, -100]] }))).toEqual(['keep-out 2.swing']);
+  });
+
+  test('touching the edge of an arc is meeting it, staying off it by a hundredth is not', () => {
+    expect(places([home, to(40)], withMotion({ keepOut: [[40, 60]] }))).toEqual(['keep-out 2.swing']);
+    expect(places([home, to(39.99)], withMotion({ keepOut: [[40, 60]] }))).toEqual([]);
+  });
+
+  test('the close rig turns between its stations through 90 degrees, and never through 0', () => {
+    expect(places([home, near, far, near], demoRigNarrow)).toEqual([]);
+    expect(places([home, to(0)], demoRigNarrow)).toEqual(['out-of-limits 2.swing', 'keep-out 2.swing']);
+    expect(places([home, near, to(-32.62)], withNarrowLimits(-150, 150))).toEqual(['keep-out 3.swing']);
+  });
+
+  const withNarrowLimits = (minDeg: number, maxDeg: number): RigDocument => ({
+    ...demoRigNarrow,
+    motion: { ...demoRigNarrow.motion, minDeg, maxDeg } as NonNullable<RigDocument['motion']>,
+  });
+
+  test('the second pass of a repeat begins where the first ended', () => {
+    const rig = withMotion({ keepOut: [[100, 110]], homeDeg: 90 });
+    // 90 → 20 → 95: in the second pass 95 → 20 is free; but 95 → 120 of another protocol is not.
+    expect(places([home, repeat(2, to(20), to(95))], rig)).toEqual([]);
+    const turned = withMotion({ keepOut: [[50, 60]], homeDeg: 0 });
+    expect(places([home, repeat(2, to(20), to(40))], turned)).toEqual([]);
+    expect(places([home, { kind: 'repeat', times: 1, steps: [to(-90)] }, to(40)], withMotion({ keepOut: [[-60, -50]] }))).toEqual([
+      'keep-out 2.repeat.1.swing',
+      'keep-out 3.swing',
+    ]);
+  });
+
+  test('a repeat that may run no pass at all leaves both ways open', () => {
+    const rig = withMotion({ keepOut: [[50, 60]] });
+    const until: Step = { kind: 'repeat', until: { localTime: '06:30' }, steps: [to(20), dwell] };
+    expect(places([home, to(45), until, to(-5)], rig)).toEqual([]);
+    const other = withMotion({ minDeg: -175, keepOut: [[-60, -50]] });
+    expect(places([home, until, { kind: 'swing', to: 'far' }], other)).toEqual([]);
+  });
+
+  test('the last move counts too, from wherever the sources then stand', () => {
+    expect(checkProtocol(protocol([home, near], { atEnd: { station: 'clear' } }), withMotion({ keepOut: [[40, 60]] }))).toEqual([
+      expect.objectContaining({ code: 'keep-out', path: 'atEnd' }),
+    ]);
+  });
+
+  test('homing to a place inside an arc is refused', () => {
+    expect(places([home, { kind: 'settle', for_s: 5 }], withMotion({ keepOut: [[-10, 10]] }))).toEqual(['keep-out 1.home']);
+  });
+});
+
+describe('motion', () => {
+  test('the first motion must follow home where the position at the start is not known', () => {
+    expect(places([near, dwell, far, dwell])).toEqual(['home-first 1.swing']);
+    expect(places([dwell, home, near])).toEqual([]);
+    expect(checkProtocol(protocol([dwell], { atEnd: { station: 'clear' } }), demoRigWide)).toEqual([
+      expect.objectContaining({ code: 'home-first', path: 'atEnd' }),
+    ]);
+  });
+
+  test('a start at a known angle needs no home, and the path counts from there', () => {
+    expect(checkProtocol(protocol([near, dwell]), demoRigWide, { angleDeg: 0 })).toEqual([]);
+    expect(checkProtocol(protocol([near, dwell]), withMotion({ keepOut: [[40, 60]] }), { angleDeg: 90 })).toEqual([
+      expect.objectContaining({ code: 'keep-out', path: '1.swing' }),
+    ]);
+  });
+
+  test('no step is faster than the rig', () => {
+    expect(places([home, { kind: 'swing', to: 'near', speed_deg_s: 6, acceleration_deg_s2: 2 }])).toEqual([]);
+    const findings = check([home, { kind: 'swing', to: 'near', speed_deg_s: 7, acceleration_deg_s2: 3 }]);
+    expect(findings.map(({ code, path }) => `${code} ${path}`)).toEqual(['too-fast 2.swing', 'too-fast 2.swing']);
+    expect(findings[0]?.message).toContain('up to 6 deg/s');
+  });
+
+  test('a rig without motion cannot run a protocol', () => {
+    expect(places([home, near], { ...demoRigWide, motion: undefined })).toEqual(['motion-missing null']);
+  });
+});
+
+describe('lengths in periods', () => {
+  const unmeasured = { ...demoRigWide, measured: undefined };
+
+  test('need a measured period', () => {
+    expect(places([home, near, beat, { kind: 'dwell', periods: 2 }, dwell], unmeasured)).toEqual([
+      'period-missing 3.dwell',
+      'period-missing 4.dwell',
+    ]);
+  });
+
+  test('a beat directly follows a swing', () => {
+    expect(places([home, near, { kind: 'mark', label: 'x' }, beat])).toEqual(['beat-needs-swing 4.dwell']);
+    expect(places([home, near, beat, beat])).toEqual(['beat-needs-swing 4.dwell']);
+    expect(places([home, beat])).toEqual(['beat-needs-swing 2.dwell']);
+  });
+
+  test('a swing before a repeat serves its first pass only', () => {
+    expect(places([home, near, repeat(1, beat, far), beat])).toEqual([]);
+    expect(places([home, near, repeat(2, beat, far)])).toEqual([]);
+    expect(places([home, near, repeat(2, beat, dwell)])).toEqual(['beat-needs-swing 3.repeat.1.dwell']);
+  });
+
+  test('the swing is shorter than the beat', () => {
+    // Near to far takes 9.73 s; 0.02 periods are 8.4 s.
+    const [finding] = check([home, near, far, { kind: 'dwell', beat_periods: 0.02 }]);
+    expect(finding).toMatchObject({ code: 'beat-too-short', path: '4.dwell' });
+    expect(finding?.message).toContain('9.7 s');
+    expect(places([home, near, far, { kind: 'dwell', beat_periods: 0.024 }])).toEqual([]);
+  });
+});

@@ -1,0 +1,232 @@
+import * as fc from 'fast-check';
+import { checkDocumentText, checkProtocol } from '@/shared/protocol/check';
+import type { ProtocolDocument, Step } from '@/shared/protocol/document';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import type { RigDocument } from '@/shared/rig/document';
+import { documents } from './arbitraries';
+
+const home: Step = { kind: 'home' };
+const near: Step = { kind: 'swing', to: 'near' };
+const far: Step = { kind: 'swing', to: 'far' };
+const dwell: Step = { kind: 'dwell', for_s: 600 };
+const beat: Step = { kind: 'dwell', beat_periods: 2 };
+const repeat = (times: number, ...steps: Step[]): Step => ({ kind: 'repeat', times, steps });
+const protocol = (steps: Step[], more: Partial<ProtocolDocument> = {}): ProtocolDocument => ({
+  formatVersion: 1,
+  name: 'Test',
+  steps,
+  ...more,
+});
+const check = (steps: unknown[], rig: RigDocument = demoRigWide) => checkProtocol({ formatVersion: 1, name: 'Test', steps }, rig);
+const places = (steps: unknown[], rig: RigDocument = demoRigWide) => check(steps, rig).map(({ code, path }) => `${code} ${path}`);
+
+test('a sound protocol has no findings', () => {
+  expect(
+    check([
+      home,
+      near,
+      repeat(6, far, beat, near, beat),
+      { kind: 'settle', for_s: 60 },
+      { kind: 'wait', until: { localTime: '06:30', ifPast: 'next day' } },
+    ]),
+  ).toEqual([]);
+});
+
+test('protocols of built steps that stay within the limits are accepted', () => {
+  fc.assert(fc.property(documents, (document) => expect(checkProtocol(document, demoRigWide)).toEqual([])));
+});
+
+describe('what does not fit the format is refused at its place', () => {
+  test.each([
+    ['a step kind that there is none of', [home, { kind: 'swivel' }], 'unknown-kind 2.swivel', 'Accepted are: home, swing'],
+    ['a step without a kind', [home, {}], 'unknown-kind 2', 'has no kind'],
+    ['a step that is no object', [home, 7], 'invalid-field 2', 'must be a JSON object'],
+    [
+      'a field that the step does not have',
+      [home, { kind: 'dwell', for_s: 5, speed: 1 }],
+      'unknown-field 2.dwell',
+      'for_s, periods, beat_periods',
+    ],
+    ['a field of the wrong type', [home, { kind: 'dwell', for_s: '600' }], 'invalid-field 2.dwell', 'for_s is "600"'],
+    ['a length that is not positive', [home, { kind: 'dwell', for_s: 0 }], 'invalid-field 2.dwell', 'above 0'],
+    [
+      'a dwell of no length',
+      [home, { kind: 'dwell' }],
+      'invalid-field 2.dwell',
+      'exactly one of for_s, periods, beat_periods is needed, got none',
+    ],
+    ['a dwell of two lengths', [home, { kind: 'dwell', for_s: 5, periods: 2 }], 'invalid-field 2.dwell', 'got for_s and periods'],
+    ['a swing to nowhere', [home, { kind: 'swing' }], 'invalid-field 2.swing', 'to is missing. It takes the name of a station'],
+    ['a time that is none', [home, { kind: 'wait', until: { localTime: '25:00' } }], 'invalid-field 2.wait', 'HH:MM'],
+    [
+      'a repeat that is half typed',
+      [home, { kind: 'repeat', times: 2 }],
+      'invalid-field 2.repeat',
+      'steps is missing. It takes a list of steps',
+    ],
+    [
+      'a step inside repeats',
+      [home, repeat(2, repeat(2, { kind: 'swing', to: 5 } as unknown as Step))],
+      'invalid-field 2.repeat.1.repeat.1.swing',
+      'name of a station',
+    ],
+  ])('%s', (...[, steps, place, words]) => {
+    const findings = check(steps);
+    expect(findings.map(({ code, path }) => `${code} ${path}`)).toContain(place);
+    expect(findings.map(({ message }) => message).join('\n')).toContain(words);
+  });
+
+  test('an unknown field of the document itself', () => {
+    expect(checkProtocol({ formatVersion: 1, name: 'x', steps: [home], colour: 'red' }, demoRigWide)).toEqual([
+      expect.objectContaining({ code: 'unknown-field', path: null, message: expect.stringContaining('onInterruption') as string }),
+    ]);
+  });
+
+  test('an unknown field inside one of its parts', () => {
+    const [finding] = checkProtocol({ formatVersion: 1, name: 'x', steps: [home], atEnd: { stations: 'clear' } }, demoRigWide);
+    expect(finding).toMatchObject({ code: 'unknown-field', path: 'atEnd' });
+  });
+
+  test('another format version', () => {
+    expect(checkProtocol({ formatVersion: 2, name: 'x', steps: [home] }, demoRigWide)).toEqual([
+      expect.objectContaining({ code: 'invalid-field', path: 'formatVersion' }),
+    ]);
+  });
+});
+
+describe('half-typed documents give findings, never exceptions', () => {
+  test.each([[null], [undefined], [7], ['text'], [[]], [{}], [{ steps: null }], [{ formatVersion: 1, name: '', steps: [null, [], 'x'] }]])(
+    '%j',
+    (value) => {
+      expect(checkProtocol(value, demoRigWide).length).toBeGreaterThan(0);
+    },
+  );
+
+  test('anything at all', () => {
+    fc.assert(
+      fc.property(fc.anything(), fc.array(fc.anything(), { maxLength: 4 }), (value, steps) => {
+        expect(Array.isArray(checkProtocol(value, demoRigWide))).toBe(true);
+        expect(Array.isArray(checkProtocol({ formatVersion: 1, name: 'x', steps }, demoRigWide))).toBe(true);
+      }),
+    );
+  });
+
+  test('nested a hundred thousand deep', () => {
+    let step: Step = dwell;
+    for (let depth = 0; depth < 100_000; depth += 1) step = { kind: 'repeat', times: 1, steps: [step] };
+    expect(checkProtocol(protocol([step]), demoRigWide)).toEqual([expect.objectContaining({ code: 'nested-too-deep' })]);
+  });
+
+  test('no steps, and a repeat without steps', () => {
+    expect(places([])).toEqual(['no-steps null']);
+    expect(places([home, repeat(2)])).toEqual(['no-steps 2.repeat']);
+  });
+});
+
+describe('repeats', () => {
+  const nested = (depth: number): Step => (depth === 0 ? dwell : repeat(1, nested(depth - 1)));
+
+  test('nest four deep, not five', () => {
+    expect(places([home, nested(4)])).toEqual([]);
+    expect(places([home, nested(5)])).toEqual(['nested-too-deep 2.repeat.1.repeat.1.repeat.1.repeat.1.repeat']);
+  });
+
+  test('execute 10,000 steps, not one more', () => {
+    expect(places([home, repeat(99, repeat(101, dwell))])).toEqual([]);
+    expect(places([repeat(10_000, dwell)])).toEqual([]);
+    const [finding] = check([home, repeat(10_000, dwell)]);
+    expect(finding).toMatchObject({ code: 'too-many-steps', path: '2.repeat' });
+    expect(finding?.message).toContain('10,001');
+    expect(places([home, repeat(1_000_000, repeat(1_000_000, repeat(1_000_000, dwell)))])).toEqual(['too-many-steps 2.repeat']);
+  });
+
+  test('until a local time must take time in each pass, and fit a day into 10,000 steps', () => {
+    const until = (...steps: Step[]): Step => ({ kind: 'repeat', until: { localTime: '06:30' }, steps });
+    expect(places([home, until(near, far)])).toEqual(['endless-repeat 2.repeat', 'too-many-steps 2.repeat']);
+    expect(places([home, until({ kind: 'dwell', for_s: 5 })])).toEqual(['too-many-steps 2.repeat']);
+    expect(places([home, until(near, beat, far, beat)])).toEqual([]);
+  });
+
+  test('bounds that would have no effect are refused', () => {
+    expect(places([home, { kind: 'repeat', times: 2, atMost: 5, steps: [dwell] }])).toEqual(['field-not-used 2.repeat']);
+    expect(places([home, { kind: 'repeat', times: 2, atLeast: 5, steps: [dwell] }])).toEqual(['field-not-used 2.repeat']);
+    expect(places([home, { kind: 'settle', for_s: 5, atMost_s: 9, otherwise: 'stop' }])).toEqual([
+      'field-not-used 2.settle',
+      'field-not-used 2.settle',
+    ]);
+    expect(places([home, { kind: 'wait', until: { localTime: '06:30' }, otherwise: 'stop' }])).toEqual(['field-not-used 2.wait']);
+  });
+});
+
+describe('what is not built yet is valid in the format and refused as not-yet', () => {
+  test.each<[string, unknown, string]>([
+    ['kick', { kind: 'kick', amplitude_urad: 2000 }, '2.kick'],
+    ['proof', { kind: 'proof' }, '2.proof'],
+    ['prompt', { kind: 'prompt', text: 'Hands clear' }, '2.prompt'],
+    ['rotate', { kind: 'rotate', period_s: 1800, turns: 2 }, '2.rotate'],
+    ['a shaped swing', { kind: 'swing', to: 'near', profile: 'shaped' }, '2.swing'],
+    ['settling until calm', { kind: 'settle', calmWhen: { amplitude_urad: 50, window_s: 900 } }, '2.settle'],
+    ['waiting for a channel', { kind: 'wait', until: { channel: 'box temperature', below: 21 } }, '2.wait'],
+    ['a camera frame', { kind: 'mark', label: 'x', frame: true }, '2.mark'],
+    ['repeating until u', { kind: 'repeat', until: { relativeStatisticalU: 0.001 }, atMost: 50, steps: [dwell] }, '2.repeat'],
+    ['counting good passes', { kind: 'repeat', times: 2, counting: 'good', atMost: 5, steps: [dwell] }, '2.repeat'],
+    ['shuffling', { kind: 'repeat', times: 2, order: 'shuffled', steps: [repeat(1, dwell)] }, '2.repeat'],
+  ])('%s', (_, step, path) => {
+    expect(places([home, step])).toEqual([`not-yet ${path}`]);
+  });
+
+  test.each([
+    ['goodWhen', { goodWhen: { residual_urad: 40 } }, 'goodWhen'],
+    ['another method', { evaluation: { method: 'period' as const } }, 'evaluation'],
+    ['another drift removal', { evaluation: { drift: 'gls' as const } }, 'evaluation'],
+  ])('%s', (_, more, path) => {
+    expect(checkProtocol(protocol([home, dwell], more), demoRigWide)).toEqual([expect.objectContaining({ code: 'not-yet', path })]);
+  });
+
+  test('what is built of these fields is accepted', () => {
+    expect(
+      checkProtocol(
+        protocol(
+          [
+            home,
+            near,
+            { kind: 'swing', to: 'far', profile: 'plain' },
+            { kind: 'mark', label: 'x', frame: false },
+            { kind: 'repeat', times: 1, counting: 'all', order: 'as written', steps: [dwell] },
+          ],
+          {
+            onInterruption: 'resume',
+            atEnd: { station: 'clear', drivers: 'release' },
+            evaluation: { method: 'equilibrium', drift: 'aba', channel: 'deflection' },
+          },
+        ),
+        demoRigWide,
+      ),
+    ).toEqual([]);
+  });
+
+  test('a required bound is asked for as well', () => {
+    expect(places([home, { kind: 'repeat', until: { relativeStatisticalU: 0.001 }, steps: [dwell] }])).toEqual([
+      'field-missing 2.repeat',
+      'not-yet 2.repeat',
+    ]);
+  });
+});
+
+describe('texts of files', () => {
+  test('what is no JSON is shown by line and column', () => {
+    const { document, findings } = checkDocumentText('{\n  "formatVersion": 1,\n  "name": "x",\n  "steps": [ {"kind": "home"}, ]\n}');
+    expect(document).toBeNull();
+    expect(findings).toEqual([{ code: 'not-json', path: null, message: expect.stringMatching(/^Line 4, column 32: /) as string }]);
+  });
+
+  test('a good text gives the document, with a byte order mark or without', () => {
+    const text = JSON.stringify(protocol([home]));
+    expect(checkDocumentText(text)).toEqual({ document: protocol([home]), findings: [] });
+    expect(checkDocumentText(`\uFEFF${text}`).document).toEqual(protocol([home]));
+  });
+
+  test('JSON that is no protocol gives the places', () => {
+    expect(checkDocumentText('[]').findings).toEqual([expect.objectContaining({ code: 'invalid-field', path: null })]);
+  });
+});

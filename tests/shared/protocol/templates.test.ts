@@ -1,0 +1,101 @@
+import { checkProtocol } from '@/shared/protocol/check';
+import type { Step } from '@/shared/protocol/document';
+import { templateById, templates, templatesNotYet } from '@/shared/protocol/templates';
+import { planTimeline } from '@/shared/protocol/timeline';
+import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
+import { rigDocumentSchema } from '@/shared/rig/document';
+
+const make = (id: string, rig = demoRigWide) => {
+  const template = templateById(id);
+  if (template === undefined) throw new Error(`no template ${id}`);
+  return template.make(rig);
+};
+
+test.each(templates.map((template) => [template.id, template] as const))(
+  '%s can be carried out on the wide demo rig as it is',
+  (_, template) => {
+    expect(checkProtocol(template.make(demoRigWide), demoRigWide)).toEqual([]);
+  },
+);
+
+test('all but the four stations can be carried out on the close rig', () => {
+  const refused = templates.filter((template) => checkProtocol(template.make(demoRigNarrow), demoRigNarrow).length > 0);
+  expect(refused.map(({ id }) => id)).toEqual(['four-station']);
+  expect(checkProtocol(make('four-station', demoRigNarrow), demoRigNarrow).map(({ code }) => code)).toEqual(
+    expect.arrayContaining(['unknown-station']) as string[],
+  );
+});
+
+test('ids are unique, and those that make no sense yet are not listed', () => {
+  expect(new Set(templates.map(({ id }) => id)).size).toBe(templates.length);
+  for (const id of templatesNotYet) expect(templateById(id)).toBeUndefined();
+});
+
+test('near-far-short: home, near, six pairs of far and near at a beat of two periods', () => {
+  const reversal = (to: string): Step[] => [
+    { kind: 'swing', to },
+    { kind: 'dwell', beat_periods: 2 },
+  ];
+  expect(make('near-far-short').steps).toEqual([
+    { kind: 'home' },
+    { kind: 'swing', to: 'near' },
+    { kind: 'repeat', times: 6, steps: [...reversal('far'), ...reversal('near')] },
+  ]);
+  expect(make('near-far-short').evaluation).toEqual({ method: 'equilibrium', drift: 'aba', channel: 'deflection' });
+});
+
+test('near-far: a first pair and 16 more, then clear', () => {
+  const document = make('near-far');
+  const timeline = planTimeline({ protocol: document, rig: demoRigWide, timeZone: 'UTC' }, { utcMs: 0, angleDeg: 0 });
+  expect(timeline.dwells).toBe(34);
+  expect(document.atEnd).toEqual({ station: 'clear', drivers: 'keep' });
+  expect(timeline.items.at(-1)?.station).toBe('clear');
+});
+
+test('four-station: 184 dwells in 23 blocks after the first pair, near and far alternating throughout', () => {
+  const timeline = planTimeline({ protocol: make('four-station'), rig: demoRigWide, timeZone: 'UTC' }, { utcMs: 0, angleDeg: 0 });
+  expect(timeline.dwells).toBe(2 + 184);
+  const sides = timeline.items.filter(({ kind }) => kind === 'dwell').map(({ station }) => station.slice(0, 3));
+  expect(sides.every((side, index) => side !== sides[index - 1])).toBe(true);
+});
+
+test('still: an hour of settling, then 32 dwells without a motion', () => {
+  const { items } = planTimeline({ protocol: make('still'), rig: demoRigWide, timeZone: 'UTC' }, { utcMs: 0, angleDeg: 0 });
+  expect(items.filter(({ kind }) => kind === 'dwell')).toHaveLength(32);
+  expect(items.findLastIndex(({ kind }) => kind === 'swing')).toBeLessThan(items.findIndex(({ kind }) => kind === 'dwell'));
+});
+
+test('scan: angles up and down that each rig can reach', () => {
+  const anglesOf = (rig: typeof demoRigWide) =>
+    make('scan', rig).steps.flatMap((step) => (step.kind === 'swing' && typeof step.to !== 'string' ? [step.to.angle_deg] : []));
+  expect(anglesOf(demoRigWide)).toEqual([-70, -45, -30, -20, -10, 0, 10, 20, 30, 45, 70, 45, 30, 20, 10, 0, -10, -20, -30, -45, -70]);
+  expect(anglesOf(demoRigNarrow)).toEqual([33, 40, 50, 65, 90, 115, 130, 140, 147, 140, 130, 115, 90, 65, 50, 40, 33]);
+});
+
+test('empty-control: the steps of the overnight reversals on a rig whose spheres are off', () => {
+  expect(make('empty-control').steps).toEqual(make('near-far').steps);
+  const rig = templateById('empty-control')?.rigFor(demoRigWide);
+  expect(rig?.sources).toEqual({ ...demoRigWide.sources, shape: 'none' });
+  expect(templateById('near-far')?.rigFor(demoRigWide)).toBe(demoRigWide);
+});
+
+test('a rig without a clear station ends where it stands', () => {
+  const stations = Object.fromEntries(Object.entries(demoRigWide.stations).filter(([name]) => name !== 'clear'));
+  expect(make('near-far', { ...demoRigWide, stations }).atEnd).toBeUndefined();
+});
+
+describe('the demo rigs', () => {
+  test.each([
+    ['wide', demoRigWide],
+    ['close', demoRigNarrow],
+  ])('%s fits the format of rig.json', (_, rig) => {
+    expect(rigDocumentSchema.parse(rig)).toEqual(rig);
+  });
+
+  test('the wide one stands as the format describes the demo rig', () => {
+    const angles = Object.fromEntries(Object.entries(demoRigWide.stations).map(([name, { value }]) => [name, value]));
+    expect(angles).toEqual({ near: 20.18, far: -20.18, clear: 90, inline: 0, across: 90, nearBack: -159.82, farBack: 159.82 });
+    expect(demoRigWide.motion).toMatchObject({ homeDeg: 0, minDeg: -175, maxDeg: 175 });
+    expect(demoRigWide.motion?.keepOut ?? []).toEqual([]);
+  });
+});
