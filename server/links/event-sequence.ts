@@ -1,0 +1,58 @@
+import type { EventMessage } from '@/firmware-protocol/codec';
+
+/**
+ * Puts the controller's numbered events into order and knows which are missing, so that a lost line loses no
+ * timestamp (SPEC 7.5): nothing is given on before everything before it.
+ */
+export class EventSequence {
+  /** Number of the last event given on. */
+  private last = 0;
+  /** Greatest number that is known to exist. */
+  private newest = 0;
+  private readonly early = new Map<number, EventMessage>();
+
+  /** Counts from after `number`: what came before is not of interest. */
+  startAfter(number: number): void {
+    this.last = number;
+    this.newest = number;
+    this.early.clear();
+  }
+
+  /** A reply told that events up to `number` have happened. */
+  heardOf(number: number): void {
+    this.newest = Math.max(this.newest, number);
+  }
+
+  /** The events that can be given on now, in order; none for one that is known already. */
+  add(event: EventMessage): EventMessage[] {
+    if (event.number <= this.last) return [];
+    this.heardOf(event.number);
+    this.early.set(event.number, event);
+    return this.ready();
+  }
+
+  /** Events before `oldest` are lost for good. */
+  skipTo(oldest: number): EventMessage[] {
+    this.last = Math.max(this.last, oldest - 1);
+    return this.ready();
+  }
+
+  /** First number that is missing; null when all are here. */
+  get missing(): number | null {
+    return this.last < this.newest ? this.last + 1 : null;
+  }
+
+  hasGivenOn(number: number): boolean {
+    return this.last >= number;
+  }
+
+  private ready(): EventMessage[] {
+    const events: EventMessage[] = [];
+    for (let event = this.early.get(this.last + 1); event !== undefined; event = this.early.get(this.last + 1)) {
+      this.last += 1;
+      this.early.delete(this.last);
+      events.push(event);
+    }
+    return events;
+  }
+}
