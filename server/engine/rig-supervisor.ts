@@ -1,4 +1,4 @@
-import type { Sha256 } from '@/shared/archive/chain';
+import { appendEvent, type Sha256 } from '@/shared/archive/chain';
 import type { RunStart } from '@/shared/archive/run-records';
 import { checkProtocol } from '@/shared/protocol/check';
 import type { Finding } from '@/shared/protocol/finding';
@@ -100,6 +100,24 @@ export class RigSupervisor {
 
   quarantinedOf(rigId: string): QuarantinedRun | null {
     return this.quarantine.get(rigId) ?? null;
+  }
+
+  /**
+   * Ends a quarantined run as failed, in the name of the person who looked at the rig, and frees the rig. Its snapshot stays as it was.
+   */
+  async giveUp(rigId: string, by: string): Promise<void> {
+    const run = this.quarantine.get(rigId);
+    if (run === undefined) return;
+    const { store, clock, sha256 } = this.parts;
+    const { labId, runId } = run.start;
+    const stored = await store.load(labId, runId);
+    if (stored === null) return;
+    const endedAtUtcMs = clock.utcMs();
+    const event = appendEvent(stored.chain, { at: new Date(endedAtUtcMs).toISOString(), kind: 'failed', data: { code: 'given-up', by, reason: run.why } }, sha256);
+    const { snapshot, chartVersion } = stored;
+    const summary = { state: 'failed', outcome: 'failed' as const, startedAtUtcMs: null, endedAtUtcMs, predictedEndUtcMs: null };
+    await store.commit({ labId, runId, expectedSeq: stored.chain.seq, snapshot, chartVersion, steps: [], events: [event], summary });
+    this.quarantine.delete(rigId);
   }
 
   onChange(listener: SupervisorListener): () => void {

@@ -93,6 +93,12 @@ export class FakeLink implements TurntableLink {
     for (const id of this.unconfirmed.splice(0)) this.confirm(id);
   }
 
+  /** The process that repeated unconfirmed stops and read events again is gone. */
+  forget(): void {
+    this.unconfirmed.length = 0;
+    this.unsaid.length = 0;
+  }
+
   /** Nobody has renewed the motion lease for 2 s. */
   lapseLease(): void {
     this.endMotion('lease');
@@ -102,6 +108,10 @@ export class FakeLink implements TurntableLink {
     this.interlockClosed = false;
     this.say({ kind: 'interlock', at: this.at(), closed: false });
     this.endMotion('interlock');
+  }
+
+  edge(angleDeg: number, direction: 'ccw' | 'cw'): void {
+    this.say({ kind: 'edge', at: this.at(), angleDeg, direction });
   }
 
   closeInterlock(): void {

@@ -122,6 +122,7 @@ export function makeBench(start: RunStart = runStart()): Bench {
     pass: (seconds, until) => clock.advance(1000 * seconds, until),
     restart: async (afterS) => {
       bench.driver.close();
+      link.forget();
       clock.after(2000, () => link.lapseLease());
       await clock.advance(1000 * afterS);
       bench.driver = new RunDriver(parts(await store.load()));

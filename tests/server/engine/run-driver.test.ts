@@ -440,6 +440,38 @@ describe('interruptions', () => {
     expect(brief(bench)).toEqual(['home done', 'swing done', 'dwell done', 'mark done', 'swing done', 'dwell done']);
   });
 
+  test('a move that ended as it should while the link was down is done, with the controller’s own end', async () => {
+    const bench = await underWay(75, runStart({ ...shortProtocol, onInterruption: 'resume' }));
+    bench.link.drop(30_000);
+    await bench.pass(400);
+    expect(brief(bench)).toEqual(['home done', 'swing done', 'dwell done', 'mark done', 'swing done', 'dwell done']);
+    const [swing, dwell] = bench.store.log().slice(4);
+    expect(swing?.endUtcMs).toBeLessThan(startUtcMs + 80_000);
+    expect(dwell?.startUtcMs).toBe(swing?.endUtcMs);
+  });
+
+  test('a hold that a dead process could not confirm is sent again by the next one', async () => {
+    const bench = await underWay(30);
+    bench.link.drop(60_000);
+    bench.driver.hold('Ben');
+    await bench.pass(1);
+    await bench.restart(5);
+    await bench.pass(60);
+    expect(bench.driver.facts()).toMatchObject({ state: 'held', reason: 'Ben asked to hold.' });
+    expect(bench.driver.facts().intervention?.confirmedAtUtcMs).toBeGreaterThan(startUtcMs + 90_000);
+  });
+
+  test('a move that began and ended while nobody listened is taken as begun at the time it was sent with', async () => {
+    const bench = await underWay(65.5, runStart({ ...shortProtocol, onInterruption: 'resume' }));
+    const startsAt = bench.driver.state().context.ahead?.startUtcMs;
+    expect(startsAt).toBeGreaterThan(startUtcMs + 65_500);
+    await bench.restart(5);
+    await bench.pass(400);
+    expect(bench.driver.facts().state).toBe('finished');
+    expect(bench.store.log().find(({ kind, outcome }) => kind === 'swing' && outcome === 'cut short')).toMatchObject({ startUtcMs: startsAt, plannedStartUtcMs: startsAt });
+    expect(brief(bench)).toContain('swing late');
+  });
+
   test('a gap of more than 10 min holds the run although its protocol says resume', async () => {
     const bench = await underWay(20, runStart({ ...shortProtocol, onInterruption: 'resume' }));
     bench.link.drop(1_200_000);
@@ -470,4 +502,99 @@ describe('interruptions', () => {
     await bench.pass(200);
     expect(bench.driver.facts()).toMatchObject({ state: 'held', reason: expect.stringContaining('interlock') });
   });
+});
+
+describe('other steps', () => {
+  const steps = (...list: ProtocolDocument['steps']): ProtocolDocument => ({ formatVersion: 1, name: 'Steps', steps: [{ kind: 'home' }, { kind: 'swing', to: 'near' }, ...list] });
+
+  test('settle lasts as long as it says', async () => {
+    const bench = await underWay(200, runStart(steps({ kind: 'settle', for_s: 90, label: 'heat' }, { kind: 'swing', to: 'far' })));
+    const [, , settled, swing] = bench.store.log();
+    expect(settled).toMatchObject({ kind: 'settle', outcome: 'done', label: 'heat', station: 'near', good: null });
+    expect((settled?.endUtcMs ?? 0) - (settled?.startUtcMs ?? 0)).toBeCloseTo(90_000, 6);
+    expect(swing?.startUtcMs).toBe(settled?.endUtcMs);
+  });
+
+  // 22:00 UTC on 1 March is 23:00 in Oslo (UTC+1 in winter).
+  test.each([
+    ['still to come: waited for', { localTime: '23:05' }, 'finished', 300],
+    ['past: gone on', { localTime: '22:00' }, 'finished', 0],
+    ['past and to be held', { localTime: '22:00', ifPast: 'hold' as const }, 'held', 0],
+  ])('wait until a local time that is %s', async (_, until, state, waitedS) => {
+    const bench = await underWay(700, runStart(steps({ kind: 'wait', until }, { kind: 'swing', to: 'far' })));
+    expect(bench.driver.facts().state).toBe(state);
+    const wait = bench.store.log()[2];
+    expect(wait?.outcome).toBe('done');
+    expect((wait?.endUtcMs ?? 0) - startUtcMs).toBeCloseTo(waitedS === 0 ? (wait?.startUtcMs ?? 0) - startUtcMs : 1000 * waitedS, 6);
+  });
+
+  test('a repeat until a local time begins no pass that would end after it', async () => {
+    const bench = await underWay(4000, runStart(steps({ kind: 'repeat', until: { localTime: '23:10' }, steps: [{ kind: 'swing', to: 'far' }, { kind: 'dwell', for_s: 60 }, { kind: 'swing', to: 'near' }, { kind: 'dwell', for_s: 60 }] })));
+    expect(bench.driver.facts().state).toBe('finished');
+    const last = bench.store.log().at(-1);
+    expect(last?.endUtcMs).toBeLessThanOrEqual(startUtcMs + 600_000);
+    expect(last?.path).toBe('3.repeat[4].4.dwell');
+  });
+
+  test('at the end the sources turn to the station asked for, and the drivers are released only if asked', async () => {
+    const keep = await underWay(200, runStart({ ...shortProtocol, atEnd: { station: 'clear' } }));
+    expect(keep.store.log().at(-1)).toMatchObject({ path: 'atEnd.swing', station: 'clear', outcome: 'done', angleEndDeg: 90 });
+    expect(sent(keep, 'stop')).toEqual([]);
+    const release = await underWay(200, runStart({ ...shortProtocol, atEnd: { drivers: 'release' } }));
+    expect(sent(release, 'stop')).toEqual([expect.objectContaining({ releaseDrivers: true })]);
+    expect(release.store.events.at(-1)).toMatchObject({ kind: 'finished', data: { drivers: 'release' } });
+  });
+
+  test('a protocol that begins to swing without a known position fails with what to do', async () => {
+    const bench = makeBench(runStart({ ...shortProtocol, steps: [{ kind: 'swing', to: 'near' }] }));
+    bench.link.angleDeg = null;
+    bench.driver.start();
+    await bench.pass(5);
+    expect(bench.driver.facts()).toMatchObject({ state: 'failed', reason: 'Step 1.swing: the position of the turntable is not known. Begin the protocol with a home step.' });
+  });
+
+  test('a move that would leave the limits is not sent, whatever was checked before', async () => {
+    const bench = await underWay(60, runStart(steps({ kind: 'swing', to: { angle_deg: 300 } })));
+    expect(bench.driver.facts()).toMatchObject({ state: 'failed', reason: expect.stringContaining('motion.maxDeg') });
+    expect(bench.link.motions).toHaveLength(2);
+  });
+
+  test('a pass of the home edge is logged and proves the angle of the swing', async () => {
+    const bench = await underWay(70);
+    bench.link.edge(0.004, 'cw');
+    await bench.pass(100);
+    expect(bench.store.events.find(({ kind }) => kind === 'home-edge')?.data).toMatchObject({ angleDeg: 0.004, direction: 'cw' });
+    expect(bench.store.log()[4]).toMatchObject({ kind: 'swing', angleSource: 'edge-verified' });
+    expect(bench.store.log()[1]).toMatchObject({ kind: 'swing', angleSource: 'counted' });
+  });
+});
+
+test('the predicted finish stands from the start and moves when the run is held up', async () => {
+  const bench = await underWay(1);
+  const planned = bench.driver.facts().predictedEndUtcMs;
+  await bench.pass(29);
+  expect(bench.driver.facts().predictedEndUtcMs).toBe(planned);
+  bench.driver.hold('Ben');
+  await bench.pass(100);
+  expect(bench.driver.facts().predictedEndUtcMs).toBeNull();
+  await bench.driver.resume('Ben');
+  const later = bench.driver.facts().predictedEndUtcMs ?? 0;
+  await bench.pass(300);
+  expect(bench.driver.facts()).toMatchObject({ state: 'finished' });
+  expect(Math.abs((bench.driver.facts().predictedEndUtcMs ?? 0) - later)).toBeLessThan(100);
+});
+
+test('listeners hear of each saved change, with what was saved', async () => {
+  const bench = makeBench();
+  const states: string[] = [];
+  let lastSeq = 0;
+  bench.driver.onChange(({ facts, events }) => {
+    if (states.at(-1) !== facts.state) states.push(facts.state);
+    for (const event of events) expect(event.seq).toBe((lastSeq += 1));
+    expect(bench.store.events.at(-1)?.seq).toBe(facts.lastSeq);
+  });
+  bench.driver.start();
+  await bench.pass(200);
+  expect(states).toEqual(['running', 'finished']);
+  expect(bench.performed.map((effect) => (effect.kind === 'notify' ? effect.topic : effect.kind))).toEqual(['started', 'finished']);
 });

@@ -1,0 +1,187 @@
+import { existsSync, readdirSync, statSync } from 'node:fs';
+import { performance } from 'node:perf_hooks';
+import { parseArgs } from 'node:util';
+import packageJson from '@/package.json';
+import { buildArchive } from '@/shared/archive/build-archive';
+import { canonicalJson } from '@/shared/archive/chain';
+import type { RunStart, SimulatedRun } from '@/shared/archive/run-records';
+import { NotYetError } from '@/shared/lib/not-yet-error';
+import { CODATA_2022_G } from '@/shared/physics/constants';
+import { checkProtocol } from '@/shared/protocol/check';
+import { faultKinds, faultKindsNotYet, isFaultKind } from '../engine/rehearsal/rehearsal-faults';
+import { type Rehearsal, rehearse } from '../engine/rehearsal/rehearse';
+import { writeArchiveFolder } from '../evaluation/archive-files';
+import { sha256Hex } from '../evaluation/sha256';
+import { type Choice, chosenProtocol, listed, Unusable } from './chosen-protocol';
+import { rehearsalParts } from './rehearsal-parts';
+
+/** `npm run -s rehearse -- …`: runs a protocol on the simulated rig in fast time and writes the archive of the run. */
+
+const usage =
+  'Usage: npm run -s rehearse -- (PROTOCOL.json | --template NAME) --out DIR [--rig RIG.json] [--seed N] [--true-g X] [--rate HZ] [--start ISO] [--draw-geometry] [--board] [--fault KIND@SECONDS]…';
+
+const options = {
+  template: { type: 'string' },
+  rig: { type: 'string' },
+  out: { type: 'string' },
+  seed: { type: 'string', default: '1' },
+  'true-g': { type: 'string', default: String(CODATA_2022_G.value) },
+  rate: { type: 'string', default: '10' },
+  start: { type: 'string', default: '2000-01-01T00:00:00Z' },
+  fault: { type: 'string', multiple: true, default: [] as string[] },
+  'draw-geometry': { type: 'boolean', default: false },
+  board: { type: 'boolean', default: false },
+} as const;
+
+const GREATEST_SEED = 4_294_967_295;
+const GREATEST_RATE_HZ = 1000;
+
+interface Request extends Choice {
+  folder: string;
+  startUtcMs: number;
+  simulated: SimulatedRun;
+}
+
+function requested(args: readonly string[]): Request {
+  const { values, positionals } = parsedArguments(args);
+  if (values['draw-geometry']) throw new NotYetError('--draw-geometry is not built yet: the geometry is exactly as in the rig document.');
+  if (values.board) throw new NotYetError('--board is not built yet: the light simulated controller is used.');
+  const { document, rig } = chosenProtocol({ positionals, template: values.template, rig: values.rig, usage });
+  const startUtcMs = instant(values.start);
+  const simulated = {
+    trueG: number('--true-g', values['true-g'], { above: 0, atMost: Infinity }),
+    seed: wholeNumber('--seed', values.seed),
+    rateHz: number('--rate', values.rate, { above: 0, atMost: GREATEST_RATE_HZ }),
+    faults: values.fault.map(faultOf),
+  };
+  return { document, rig, startUtcMs, simulated, folder: emptyFolder(values.out) };
+}
+
+function parsedArguments(args: readonly string[]) {
+  try {
+    return parseArgs({ args: [...args], options, allowPositionals: true });
+  } catch (error) {
+    throw new Unusable(`${error instanceof Error ? error.message : String(error)}\n${usage}`);
+  }
+}
+
+function number(name: string, text: string, { above, atMost }: { above: number; atMost: number }): number {
+  const value = text.trim() === '' ? Number.NaN : Number(text);
+  if (Number.isFinite(value) && value > above && value <= atMost) return value;
+  throw new Unusable(`${name} ${text}: a number above ${above}${atMost === Infinity ? '' : ` and at most ${atMost}`} is needed.`);
+}
+
+function wholeNumber(name: string, text: string): number {
+  const value = Number(text);
+  if (/^\d+$/.test(text) && value <= GREATEST_SEED) return value;
+  throw new Unusable(`${name} ${text}: a whole number from 0 to ${GREATEST_SEED} is needed.`);
+}
+
+function instant(text: string): number {
+  const utcMs = /^\d{4}-\d{2}-\d{2}T\d{2}:\d{2}(:\d{2}(\.\d+)?)?(Z|[+-]\d{2}:\d{2})$/.test(text) ? Date.parse(text) : Number.NaN;
+  if (!Number.isNaN(utcMs)) return utcMs;
+  throw new Unusable(`--start ${text}: an instant with its zone is needed, for example 2000-01-01T00:00:00Z.`);
+}
+
+function faultOf(text: string): SimulatedRun['faults'][number] {
+  const [, kind = '', seconds = ''] = /^([a-z-]+)@(\d+(?:\.\d+)?)$/.exec(text) ?? [];
+  if (isFaultKind(kind)) return { kind, atS: Number(seconds) };
+  if (faultKindsNotYet.includes(kind)) throw new NotYetError(`--fault ${kind} is not built yet. Built are: ${faultKinds.join(', ')}.`);
+  throw new Unusable(`--fault ${text}: KIND@SECONDS is needed, for example link-drop@600; the kinds are ${[...faultKinds, ...faultKindsNotYet].join(', ')}.`);
+}
+
+function emptyFolder(folder: string | undefined): string {
+  if (folder === undefined) throw new Unusable(`--out DIR is needed: the folder into which the archive is written.\n${usage}`);
+  if (!existsSync(folder)) return folder;
+  if (!statSync(folder).isDirectory()) throw new Unusable(`--out ${folder} is a file; name a folder that is new or empty.`);
+  if (readdirSync(folder).length > 0) throw new Unusable(`--out ${folder} is not empty; name a folder that is new or empty.`);
+  return folder;
+}
+
+/** The rehearsal's id: the same for the same input. */
+function runIdOf({ document, rig, startUtcMs, simulated }: Request): string {
+  const hash = sha256Hex(canonicalJson({ document, rig, startUtcMs, simulated }));
+  return [hash.slice(0, 8), hash.slice(8, 12), `8${hash.slice(13, 16)}`, `8${hash.slice(17, 20)}`, hash.slice(20, 32)].join('-');
+}
+
+function runStart(request: Request): RunStart & { simulated: SimulatedRun } {
+  const { document, rig, simulated } = request;
+  return {
+    labId: 'rehearsal',
+    runId: runIdOf(request),
+    rigId: 'simulated-rig',
+    rigName: 'Simulated rig',
+    rigRevision: 1,
+    protocolName: document.name,
+    protocolRevision: 1,
+    rig,
+    protocol: document,
+    massSetLabel: rig.sources.shape === 'none' ? 'empty' : 'as in rig.json',
+    timeZone: 'UTC',
+    operator: 'rehearsal',
+    notes: document.notes ?? '',
+    arm: null,
+    simulated,
+  };
+}
+
+function writeArchive(folder: string, start: RunStart, result: Rehearsal): void {
+  const { outcome, steps, events, channels, startedAtUtcMs, endedAtUtcMs } = result;
+  const { runId, operator, notes, massSetLabel, simulated, rig, protocol } = start;
+  const files = buildArchive(
+    {
+      run: { runId, outcome, operator, startedAtUtcMs, endedAtUtcMs, notes, massSetLabel, simulated },
+      rig,
+      protocol,
+      steps,
+      events,
+      channels,
+      createdAt: new Date(endedAtUtcMs).toISOString(),
+      software: `Evenfall ${packageJson.version}`,
+      title: `Rehearsal: ${protocol.name}`,
+    },
+    sha256Hex,
+  );
+  writeArchiveFolder(files, folder);
+}
+
+async function run(args: readonly string[]): Promise<Record<string, unknown>> {
+  const beganMs = performance.now();
+  const request = requested(args);
+  const { document, rig, startUtcMs, folder } = request;
+  const refusals = checkProtocol(document, rig, { angleDeg: rig.motion?.homeDeg ?? 0 });
+  if (refusals.length > 0) throw new Unusable(`The protocol "${document.name}" is refused:\n${listed(refusals)}`);
+  const start = runStart(request);
+  const result = await rehearse({ start, startUtcMs }, rehearsalParts());
+  writeArchive(folder, start, result);
+  return {
+    outcome: result.outcome,
+    simulated_s: Math.round(result.simulatedS * 1e6) / 1e6,
+    elapsed_s: Math.round(performance.now() - beganMs) / 1000,
+    steps: result.steps.length,
+    holds: result.holds,
+    archive: folder,
+  };
+}
+
+export interface Output {
+  out: (text: string) => void;
+  err: (text: string) => void;
+}
+
+const toProcess: Output = { out: (text) => process.stdout.write(text), err: (text) => process.stderr.write(text) };
+
+/** The command: one JSON object on `out` and 0, or a message on `err` and 2. `args` are those after the command's name. */
+export async function main(args: readonly string[], output: Output = toProcess): Promise<number> {
+  try {
+    output.out(`${JSON.stringify(await run(args))}\n`);
+    return 0;
+  } catch (error) {
+    if (error instanceof NotYetError) output.err(`rehearse: ${error.message} [${error.code}]\n`);
+    else if (error instanceof Unusable) output.err(`rehearse: ${error.message}\n`);
+    else throw error;
+    return 2;
+  }
+}
+
+if (require.main === module) void main(process.argv.slice(2)).then((code) => void (process.exitCode = code));

@@ -1,0 +1,148 @@
+import { RigSupervisor, StartRefused } from '@/server/engine/rig-supervisor';
+import { VirtualClock } from '@/server/engine/virtual-clock';
+import type { Arm, Effect } from '@/server/engine/run-context';
+import type { RunStart } from '@/shared/archive/run-records';
+import type { RunStore, RunWrite, StoredRun } from '@/server/interfaces/run-store';
+import { FakeLink } from './fake-link';
+import { MemoryStore, runStart, settle, sha256, shortProtocol, startUtcMs } from './rig-bench';
+
+/** Several runs behind one store interface. */
+class Runs implements RunStore {
+  readonly byId = new Map<string, MemoryStore>();
+  add(start: RunStart): RunStart {
+    this.byId.set(start.runId, new MemoryStore(start));
+    return start;
+  }
+  load = (_labId: string, runId: string): Promise<StoredRun | null> => this.byId.get(runId)?.load() ?? Promise.resolve(null);
+  unfinished = async (): Promise<StoredRun[]> => (await Promise.all([...this.byId.values()].map((store) => store.unfinished()))).flat();
+  commit = (write: RunWrite): Promise<void> => (this.byId.get(write.runId) as MemoryStore).commit(write);
+}
+
+interface Lab {
+  clock: VirtualClock;
+  links: Map<string, FakeLink>;
+  runs: Runs;
+  performed: Effect[];
+  arms: Map<string, Arm>;
+  newSupervisor(): RigSupervisor;
+  make(more?: Partial<RunStart>): RunStart;
+  north: FakeLink;
+}
+
+function makeLab(): Lab {
+  const clock = new VirtualClock(startUtcMs, settle);
+  const links = new Map(['north-bench', 'south-bench'].map((rigId) => [rigId, new FakeLink(clock)]));
+  const runs = new Runs();
+  const performed: Effect[] = [];
+  const arms = new Map<string, Arm>();
+  const newSupervisor = () =>
+    new RigSupervisor({ store: runs, clock, sha256, linkOf: (rigId) => links.get(rigId) ?? null, armOf: (rigId) => arms.get(rigId) ?? null, perform: (effect) => performed.push(effect) });
+  const make = (more: Partial<RunStart> = {}) => runs.add(runStart(shortProtocol, more));
+  return { clock, links, runs, performed, arms, newSupervisor, make, north: links.get('north-bench') as FakeLink };
+}
+
+const refusal = (start: () => unknown): StartRefused => {
+  try {
+    start();
+  } catch (error) {
+    if (error instanceof StartRefused) return error;
+    throw error;
+  }
+  throw new Error('it was not refused');
+};
+
+test('one run to a rig: a second start is refused until the first is over, another rig is free', async () => {
+  const lab = makeLab();
+  const supervisor = lab.newSupervisor();
+  supervisor.startRun(lab.make());
+  await lab.clock.advance(10_000);
+  expect(refusal(() => supervisor.startRun(lab.make({ runId: 'run-2' })))).toMatchObject({ code: 'rig-busy', message: expect.stringContaining('another run') });
+  supervisor.startRun(lab.make({ runId: 'run-3', rigId: 'south-bench' }));
+  expect(supervisor.driverOf('run-3')).toBe(supervisor.activeOf('south-bench'));
+  await lab.clock.advance(300_000);
+  expect(supervisor.activeOf('north-bench')).toBeNull();
+  expect(supervisor.startRun(lab.make({ runId: 'run-4' })).facts().runId).toBe('run-4');
+});
+
+test.each([
+  ['not armed', { arm: null }, 'not-armed', 'A named person on site has to arm it first'],
+  ['armed too short', { arm: { name: 'Ada Quill', untilUtcMs: startUtcMs + 60_000 } }, 'not-armed', 'before the predicted finish'],
+  ['with an arm that is over', { arm: { name: 'Ada Quill', untilUtcMs: startUtcMs - 1 } }, 'not-armed', 'not armed'],
+  ['with a protocol that names an unknown station', { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'swing', to: 'nowhere' }] } }, 'protocol-refused', 'nowhere'],
+  ['with a step that is not built', { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'kick', amplitude_urad: 2000 }] } }, 'not-yet', 'kick'],
+  ['on a rig without a link', { rigId: 'west-bench' }, 'not-ready', 'no link'],
+] as const)('a start %s is refused and nothing moves', async (_, more, code, words) => {
+  const lab = makeLab();
+  const supervisor = lab.newSupervisor();
+  const refused = refusal(() => supervisor.startRun(lab.make(more as Partial<RunStart>)));
+  expect(refused.code).toBe(code);
+  expect(refused.message).toContain(words);
+  await lab.clock.advance(60_000);
+  expect(lab.north.commands).toEqual([]);
+});
+
+test.each([
+  ['the interlock is open', (link: FakeLink): void => void (link.interlockClosed = false), 'interlock'],
+  ['the motor supply is off', (link: FakeLink): void => void (link.supplyPresent = false), 'supply'],
+  ['the line is down', (link: FakeLink): void => void (link.up = false), 'not ready'],
+] as const)('a start is refused while %s', (_, spoil, words) => {
+  const lab = makeLab();
+  spoil(lab.north);
+  expect(refusal(() => lab.newSupervisor().startRun(lab.make()))).toMatchObject({ code: 'not-ready', message: expect.stringContaining(words) });
+});
+
+test.each([
+  ['hold', 'held'],
+  ['resume', 'running'],
+  ['stop', 'stopped'],
+] as const)('at boot an unfinished run that says %s is %s', async (onInterruption, state) => {
+  const lab = makeLab();
+  const first = lab.newSupervisor();
+  const seen: string[] = [];
+  first.startRun(lab.make({ protocol: { ...shortProtocol, onInterruption } }));
+  await lab.clock.advance(30_000);
+  first.close();
+  await lab.clock.advance(5_000);
+  const second = lab.newSupervisor();
+  second.onChange((_, { facts }) => seen.push(facts.state));
+  const { taken, quarantined } = await second.recover();
+  expect({ taken: taken.map(({ runId }) => runId), quarantined }).toEqual({ taken: ['run-1'], quarantined: [] });
+  await lab.clock.advance(2_000);
+  expect(seen.at(-1)).toBe(state);
+  const gapS = lab.runs.byId.get('run-1')?.events.find(({ kind }) => kind === 'server-restarted')?.data['gapS'];
+  // The process writes down every 30 s that it lives, so the gap is known from above.
+  expect(gapS).toBeGreaterThanOrEqual(5);
+  expect(gapS).toBeLessThanOrEqual(35.1);
+});
+
+test('a run that was stored and never began is taken up by its protocol’s rule', async () => {
+  const lab = makeLab();
+  const start = lab.make();
+  (lab.runs.byId.get('run-1') as MemoryStore).stored = JSON.stringify({ start, snapshot: null, chartVersion: 1, chain: { seq: 0, hash: '0'.repeat(64) } });
+  const supervisor = lab.newSupervisor();
+  const { taken } = await supervisor.recover();
+  await lab.clock.advance(2_000);
+  expect(taken[0]?.facts().state).toBe('held');
+  expect(lab.north.motions).toEqual([]);
+  await taken[0]?.resume('Ada Quill').then((answer) => expect(answer.ok).toBe(false));
+  lab.arms.set('north-bench', { name: 'Ada Quill', untilUtcMs: startUtcMs + 3_600_000 });
+  await taken[0]?.resume('Ada Quill');
+  await lab.clock.advance(300_000);
+  expect(taken[0]?.facts().state).toBe('finished');
+});
+
+test('a run of another chart version is quarantined: nothing is sent, and its rig stays blocked with a sentence', async () => {
+  const lab = makeLab();
+  const start = lab.make();
+  (lab.runs.byId.get('run-1') as MemoryStore).stored = JSON.stringify({ start, snapshot: { version: 99 }, chartVersion: 99, chain: { seq: 0, hash: '0'.repeat(64) } });
+  const supervisor = lab.newSupervisor();
+  const { taken, quarantined } = await supervisor.recover();
+  expect(taken).toEqual([]);
+  expect(quarantined).toMatchObject([{ start: { runId: 'run-1' }, why: expect.stringContaining('another version') }]);
+  expect(refusal(() => supervisor.startRun(lab.make({ runId: 'run-2' })))).toMatchObject({ code: 'rig-busy', message: expect.stringContaining('unfinished run') });
+  await lab.clock.advance(60_000);
+  expect(lab.north.commands).toEqual([]);
+  await supervisor.giveUp('north-bench', 'Cleo');
+  expect(lab.runs.byId.get('run-1')?.events).toMatchObject([{ seq: 1, kind: 'failed', data: { by: 'Cleo' } }]);
+  expect(supervisor.startRun(lab.make({ runId: 'run-2' })).runId).toBe('run-2');
+});
