@@ -20,7 +20,7 @@ const marks = { good: { icon: 'passed', tone: 'good' }, bad: { icon: 'warning', 
 /** What the controller itself says: angle, whether it moves, and what motion depends on. */
 export function LiveFacts({ live }: { live: RigLive }) {
   return (
-    <View className="min-w-[180px] flex-1 gap-2">
+    <View className="min-w-[150px] flex-1 gap-2">
       <View>
         <Label>Turntable</Label>
         <Num size={24} light testID="rig-angle">

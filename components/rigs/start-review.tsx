@@ -1,14 +1,12 @@
 import { useRouter, type Href } from 'expo-router';
-import { useState } from 'react';
 import { View } from 'react-native';
-import { serverNowIso, useLab, useLabMutation, useLabQuery, wordsOf } from '@/components/api';
-import { Body, Button, Label, Loading, Num, Panel, PressAndKeep, ProblemNotice, Section } from '@/components/ui';
-import { startChecks, type RigView } from '@/shared/contracts/rigs';
+import { serverNowIso, useLab, useLabMutation, wordsOf } from '@/components/api';
+import { Body, Label, Num, Panel, PressAndKeep, ProblemNotice, Section } from '@/components/ui';
+import type { RigView } from '@/shared/contracts/rigs';
 import { startRun } from '@/shared/contracts/runs';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { formatClock, zoneName } from '@/shared/lib/format-time';
-import { ArmSheet } from './arm-sheet';
-import { CheckList } from './check-list';
+import { useStartChecks } from './start-check-section';
 import { useRefreshRigs } from './use-rig';
 
 export interface StartChoice {
@@ -19,39 +17,16 @@ export interface StartChoice {
   notes: string;
 }
 
-/** The start checks, the review, and the act that makes masses move. Nothing here is ever sent twice or by itself. */
+/** The review and the act that makes masses move. Nothing here is ever sent twice or by itself. */
 export function StartReview({ rig, choice }: { rig: RigView; choice: StartChoice }) {
-  const { protocolId, revision } = choice;
-  const checks = useLabQuery(startChecks, { params: { rigId: rig.id }, query: { protocolId, revision }, everyMs: 3000, enabled: protocolId !== '' });
+  const checks = useStartChecks(rig, choice);
   const data = checks.data?.data;
-  if (data === undefined) {
-    return checks.isError ? <ProblemNotice title="The start checks could not be made" {...wordsOf(checks.error)} action={{ label: 'Try again', onPress: () => void checks.refetch() }} /> : <Loading label="Making the start checks" />;
-  }
+  if (data === undefined) return null;
   return (
-    <>
-      <Section title="Start checks">
-        <CheckList checks={data.checks} />
-        {rig.arm === null ? <ArmHere rig={rig} onArmed={() => void checks.refetch()} /> : null}
-      </Section>
-      <Section title="Review">
-        <Review rig={rig} choice={choice} durationS={data.durationS} finishAt={data.finishAt} firstMove={data.firstMove} />
-        <StartAct rig={rig} choice={choice} mayStart={data.mayStart} stale={checks.isError} />
-      </Section>
-    </>
-  );
-}
-
-function ArmHere({ rig, onArmed }: { rig: RigView; onArmed: () => void }) {
-  const [open, setOpen] = useState(false);
-  const close = () => {
-    setOpen(false);
-    onArmed();
-  };
-  return (
-    <>
-      <Button icon="key" label="Arm the rig" className="self-start" onPress={() => setOpen(true)} testID="arm-here" />
-      {open ? <ArmSheet rig={rig} onClose={close} /> : null}
-    </>
+    <Section title="Review">
+      <Review rig={rig} choice={choice} durationS={data.durationS} finishAt={data.finishAt} firstMove={data.firstMove} />
+      <StartAct rig={rig} choice={choice} mayStart={data.mayStart} stale={checks.isError} />
+    </Section>
   );
 }
 

@@ -5,6 +5,7 @@ import { useLabQuery, useMay, wordsOf } from '@/components/api';
 import { Body, Empty, Field, Loading, Panel, ProblemNotice, Screen, Section, Select } from '@/components/ui';
 import { getProtocol, listProtocols, type ProtocolSummary } from '@/shared/contracts/protocols';
 import type { RigView } from '@/shared/contracts/rigs';
+import { StartCheckSection } from './start-check-section';
 import { StartReview } from './start-review';
 import { useRig } from './use-rig';
 
@@ -55,12 +56,13 @@ function StartForm({ rig, issued, title, back }: StartFormProps) {
   const revisions = useLabQuery(getProtocol, { params: { protocolId } }).data?.data.revisions ?? [];
   const revision = revisions.find(({ number }) => String(number) === chosenRevision)?.number ?? protocol?.latestRevision ?? 1;
   const options = revisions.length === 0 ? [{ value: String(revision), label: `Revision ${revision}` }] : revisions.map(({ number, note }) => ({ value: String(number), label: `Revision ${number}${note === '' ? '' : `: ${note}`}` }));
+  const choice = { protocolId, protocolName: protocol?.name ?? '', revision, massSetId, notes };
   const choose = (id: string) => {
     setProtocolId(id);
     setChosenRevision('');
   };
   return (
-    <Screen title={title} back={back} testID="start-screen">
+    <Screen title={title} back={back} testID="start-screen" aside={<StartReview rig={rig} choice={choice} />}>
       <Section title="What to run">
         <Panel className="gap-4">
           <View className="gap-4 wide:flex-row wide:*:flex-1">
@@ -71,7 +73,7 @@ function StartForm({ rig, issued, title, back }: StartFormProps) {
           <Field label="Notes for the log" value={notes} onChange={setNotes} lines={2} />
         </Panel>
       </Section>
-      <StartReview rig={rig} choice={{ protocolId, protocolName: protocol?.name ?? '', revision, massSetId, notes }} />
+      <StartCheckSection rig={rig} choice={choice} />
     </Screen>
   );
 }

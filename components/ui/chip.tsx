@@ -16,7 +16,7 @@ const dots: Record<Tone, string> = { text: 'bg-text', dim: 'bg-faint', lamp: 'bg
 /** A small outlined word: a state, a revision. Not a button. */
 export function Chip({ children, tone = 'dim', dot, mono = false, testID }: ChipProps) {
   return (
-    <View testID={testID} className="flex-row items-center gap-2 self-start rounded-full border border-line px-3 py-1">
+    <View testID={testID} className="flex-row items-center gap-2 self-center rounded-full border border-line px-3 py-1">
       {dot === undefined ? null : <View className={`h-2 w-2 rounded-full ${dots[dot]}`} />}
       <Body size={13} tone={tone} className={mono ? 'font-mono tabular' : ''}>
         {children}

@@ -1,5 +1,6 @@
 import { useId, type ReactNode, type Ref } from 'react';
 import { View } from 'react-native';
+import { Icon } from './icon';
 import { Body, Label } from './text';
 
 interface AroundProps {
@@ -109,13 +110,18 @@ export function Select<V extends string>({ label, value, options, onChange, hint
   };
   return (
     <FieldFrame id={id} label={label} hint={hint} error={error}>
-      <select id={id} data-testid={testID} className="ef-field ef-select" value={value} disabled={disabled} aria-describedby={describedBy(id, hint, error)} aria-invalid={error === undefined ? undefined : true} onChange={(event) => choose(event.target.value)}>
-        {options.map((option) => (
-          <option key={option.value} value={option.value}>
-            {option.label}
-          </option>
-        ))}
-      </select>
+      <View className="relative">
+        <select id={id} data-testid={testID} className="ef-field pr-10" value={value} disabled={disabled} aria-describedby={describedBy(id, hint, error)} aria-invalid={error === undefined ? undefined : true} onChange={(event) => choose(event.target.value)}>
+          {options.map((option) => (
+            <option key={option.value} value={option.value}>
+              {option.label}
+            </option>
+          ))}
+        </select>
+        <View className="pointer-events-none absolute bottom-0 right-3 top-0 justify-center">
+          <Icon name="open" size={18} tone="dim" />
+        </View>
+      </View>
     </FieldFrame>
   );
 }

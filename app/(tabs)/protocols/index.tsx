@@ -1,9 +1,5 @@
-import { Empty, Screen } from '@/components/ui';
+import { ProtocolsScreen } from '@/components/protocols/protocols-screen';
 
 export default function Protocols() {
-  return (
-    <Screen title="Protocols">
-      <Empty title="Nothing here yet" />
-    </Screen>
-  );
+  return <ProtocolsScreen />;
 }

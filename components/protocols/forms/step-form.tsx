@@ -1,0 +1,64 @@
+import { View } from 'react-native';
+import { Body, Field, Label } from '@/components/ui';
+import type { Step } from '@/shared/protocol/document';
+import type { RigDocument } from '@/shared/rig/document';
+import { DwellForm } from './dwell-form';
+import { RepeatForm } from './repeat-form';
+import { SettleForm } from './settle-form';
+import { SwingForm } from './swing-form';
+import { WaitForm } from './wait-form';
+
+export interface StepFormProps<S extends Step = Step> {
+  step: S;
+  onChange: (step: Step) => void;
+  rig: RigDocument | null;
+  disabled: boolean;
+}
+
+/** The fields of one step. */
+export function StepForm({ step, onChange, rig, disabled }: StepFormProps) {
+  return (
+    <View className="gap-5">
+      <OwnFields step={step} onChange={onChange} rig={rig} disabled={disabled} />
+      <Field
+        label={step.kind === 'mark' ? 'Text in the log' : 'Label in the log'}
+        value={step.label ?? ''}
+        onChange={(label) => onChange(withLabel(step, label))}
+        error={step.kind === 'mark' && step.label === '' ? 'a mark needs a text' : undefined}
+        placeholder={step.kind === 'mark' ? undefined : 'none'}
+        disabled={disabled}
+        testID="step-label"
+      />
+    </View>
+  );
+}
+
+function OwnFields({ step, onChange, rig, disabled }: StepFormProps) {
+  const common = { onChange, rig, disabled };
+  switch (step.kind) {
+    case 'swing':
+      return <SwingForm step={step} {...common} />;
+    case 'dwell':
+      return <DwellForm step={step} {...common} />;
+    case 'settle':
+      return <SettleForm step={step} {...common} />;
+    case 'wait':
+      return <WaitForm step={step} {...common} />;
+    case 'repeat':
+      return <RepeatForm step={step} {...common} />;
+    case 'home':
+      return <Label>Turns slowly to the edge of the home flag; from then on the position is known.</Label>;
+    case 'mark':
+      return <Label>Takes no time.</Label>;
+    default:
+      return <Body>This kind of step is part of the format but not of this version yet. Delete it to issue the protocol, or keep it for later.</Body>;
+  }
+}
+
+function withLabel(step: Step, label: string): Step {
+  if (step.kind === 'mark') return { ...step, label };
+  if (label !== '') return { ...step, label };
+  const rest = { ...step };
+  delete rest.label;
+  return rest;
+}

@@ -1,0 +1,89 @@
+import { useEffect, useRef } from 'react';
+import { View } from 'react-native';
+import { Empty } from '@/components/ui';
+import type { Step } from '@/shared/protocol/document';
+import { formatStepPath, type StepPath } from '@/shared/protocol/step-path';
+import { useEditor } from './editor-context';
+import { rowPaths, samePath } from './editor-reducer';
+import { StepRow } from './step-row';
+
+interface Key {
+  key: string;
+  altKey: boolean;
+  ctrlKey: boolean;
+  metaKey: boolean;
+  preventDefault: () => void;
+}
+
+/** The keyboard of the step list: arrows move the choice, Alt and arrows move the step, Delete, Enter for details. */
+function useListKeys(): (event: Key) => void {
+  const editor = useEditor();
+  const { document, selected, mayWrite } = editor;
+  const step = (by: number) => {
+    const rows = rowPaths(document);
+    const at = rows.findIndex((path) => samePath(path, selected));
+    const next = rows[at === -1 ? (by > 0 ? 0 : rows.length - 1) : Math.min(rows.length - 1, Math.max(0, at + by))];
+    if (next !== undefined) editor.select(next);
+  };
+  const plain: Record<string, () => void> = {
+    ArrowDown: () => step(1),
+    ArrowUp: () => step(-1),
+    Home: () => step(-Infinity),
+    End: () => step(Infinity),
+    Enter: () => (selected === null ? undefined : editor.openDetails(selected)),
+    Escape: () => editor.select(null),
+    ...(mayWrite ? { Delete: editor.remove, Backspace: editor.remove } : {}),
+  };
+  const withAlt: Record<string, () => void> = mayWrite ? { ArrowUp: editor.moveUp, ArrowDown: editor.moveDown, ArrowRight: editor.nest, ArrowLeft: editor.unnest } : {};
+  return (event) => {
+    if (event.ctrlKey || event.metaKey) return;
+    const act = (event.altKey ? withAlt : plain)[event.key];
+    if (act === undefined) return;
+    event.preventDefault();
+    act();
+  };
+}
+
+/** All steps of the draft, repeats with theirs inside. */
+export function StepList() {
+  const { document, selected } = useEditor();
+  const onKeyDown = useListKeys();
+  const host = useRef<View>(null);
+  const key = selected?.join('.') ?? '';
+  useEffect(() => {
+    const list = host.current as unknown as HTMLElement | null;
+    if (key === '' || list === null || !list.contains(window.document.activeElement)) return;
+    list.querySelector<HTMLElement>(`[data-path="${key}"]`)?.focus();
+  }, [key, document]);
+  if (document.steps.length === 0) {
+    return (
+      <Empty title="No step yet" icon="protocols">
+        Add the first one. Most protocols begin with home, so that the position is known.
+      </Empty>
+    );
+  }
+  return (
+    <View ref={host} role="tree" aria-label="Steps" testID="step-list" {...{ onKeyDown }}>
+      <Rows steps={document.steps} around={[]} />
+    </View>
+  );
+}
+
+function Rows({ steps, around }: { steps: readonly Step[]; around: StepPath }) {
+  const { document, selected } = useEditor();
+  const firstRow = around.length === 0 && selected === null;
+  return steps.map((step, index) => {
+    const path = [...around, index + 1];
+    const documentPath = formatStepPath(document, path) ?? '';
+    return (
+      <View key={`${documentPath} ${index}`} role="none">
+        <StepRow step={step} path={path} documentPath={documentPath} tabStop={samePath(path, selected) || (firstRow && index === 0)} />
+        {step.kind === 'repeat' && step.steps.length > 0 ? (
+          <View role="group" className="ml-5 border-l-2 border-line pl-2">
+            <Rows steps={step.steps} around={path} />
+          </View>
+        ) : null}
+      </View>
+    );
+  });
+}
