@@ -5,13 +5,14 @@ import type { BoxAverages } from '../statistics/box-average';
 import type { RingDownData } from '../statistics/ring-down';
 import { ringDownStart, type RingDownStart } from '../statistics/ring-down-start';
 import { scaleOf, spotOfAngle, withZero, type ChannelScale } from './channel-scale';
+import { curvatureBias, withoutBias } from './curvature';
 import { averagedAngles, reasonAgainstSamples, samplesIn, type DwellSamples } from './dwell-samples';
 import { dwellWindows, lengthS, type DwellWindow } from './dwell-windows';
 import { combine, measuredOscillator, type FreeOscillator, type MeasuredOscillator } from './free-oscillator';
 import { gSystem } from './g-system';
 import type { EvaluationPlan } from './registration';
 import { reversalOf, isMember, type Reversal } from './reversal';
-import { centreOf, fitRingDown, type DwellFit, type HeldOscillation } from './ring-down-fit';
+import { centreOf, fitRingDown, type DwellFit, type FitBias, type HeldOscillation } from './ring-down-fit';
 import { freeAt, solveG, stiffnessShifts, type GSolution, type GSystem } from './solve-g';
 
 /** One window that is fitted, with its averaged data. */
@@ -20,6 +21,8 @@ export interface Segment {
   averages: BoxAverages;
   /** What the sources add to ω² there, rad2/s2. */
   shift: number;
+  /** Instant of the reported centre, s after the window's start. */
+  centreS: number;
 }
 
 /** Everything that was fitted and solved, before it is put into words. */
@@ -41,6 +44,13 @@ export interface Analysis {
 
 /** A dwell that was cut short counts from this many periods on. */
 const cutShortPeriods = 1.25;
+
+/** Data are averaged to this many boxes a period before they are fitted. */
+const boxesPerPeriod = 60;
+
+/** Changes this small, relative to what they change, count as none. */
+const settledRelative = 1e-9;
+const settledZeroRad = 1e-12;
 
 /** Reads the channel, fits all dwells and solves for G. @throws UnusableArchive, NoSolutionError */
 export function analyse(archive: Archive, plan: EvaluationPlan): Analysis {
@@ -106,62 +116,87 @@ interface FitQuestion {
 
 type FitOutcome = Omit<Analysis, 'windows' | 'samplesOf' | 'measured'>;
 
-/**
- * The stiffness of the sources depends on G, G on κ, κ on the ring-down freed of that stiffness; and the zero of a spot scale
- * on the equilibria. All settle in a few rounds.
- */
-function iterate(question: FitQuestion, rough: ChannelScale): FitOutcome {
-  let scale = rough;
-  let start = question.start;
-  let shifts = question.samples.map(() => 0);
-  let outcome: FitOutcome | null = null;
-  for (let round = 0; round < 12; round += 1) {
-    const settled = fitOnce({ ...question, start }, scale, shifts);
-    outcome = settled.outcome;
-    const omegaSquared = outcome.free.omega0Squared.value;
-    const moved = Math.max(0, ...settled.shifts.map((shift, i) => Math.abs(shift - (shifts[i] as number)) / omegaSquared));
-    if (moved < 1e-12 && Math.abs(settled.zeroRad) < 1e-13) return outcome;
-    shifts = settled.shifts;
-    if (scale.kind === 'spot') scale = withZero(scale, spotOfAngle(scale, settled.zeroRad));
-    const ringDown = outcome.found?.ringDown;
-    if (ringDown !== null && ringDown !== undefined) start = { omega: ringDown.omega, gamma: ringDown.gamma };
-  }
-  return outcome as FitOutcome;
+/** What one round of fitting takes from the round before. */
+interface Round {
+  scale: ChannelScale;
+  averages: BoxAverages[];
+  start: RingDownStart | null;
+  shifts: number[];
+  bias: FitBias | null;
 }
 
-function fitOnce(
-  question: FitQuestion,
-  scale: ChannelScale,
-  shifts: readonly number[],
-): { outcome: FitOutcome; shifts: number[]; zeroRad: number } {
-  const { archive, plan, measured, start } = question;
-  const widthS = start === null ? 5 : (2 * Math.PI) / start.omega / 60;
-  const segments = question.samples.map((one, i) => ({
+const greatestRounds = 15;
+
+/**
+ * The stiffness of the sources depends on G, G on κ, κ on the ring-down freed of that stiffness; the bias of the linear dwell model
+ * on all of them; and the zero of a spot scale on the equilibria. All settle in a few rounds.
+ */
+function iterate(question: FitQuestion, rough: ChannelScale): FitOutcome {
+  const widthS = question.start === null ? 5 : (2 * Math.PI) / question.start.omega / boxesPerPeriod;
+  const averagesOn = (scale: ChannelScale) => question.samples.map((one) => averagedAngles(one, scale, widthS));
+  let round: Round = {
+    scale: rough,
+    averages: averagesOn(rough),
+    start: question.start,
+    shifts: question.samples.map(() => 0),
+    bias: null,
+  };
+  for (let count = 1; ; count += 1) {
+    const outcome = fitOnce(question, round);
+    const next = nextRound(outcome, round, averagesOn);
+    if (count === greatestRounds || hasSettled(outcome, round, next)) return outcome;
+    round = next;
+  }
+}
+
+function nextRound(outcome: FitOutcome, round: Round, averagesOn: (scale: ChannelScale) => BoxAverages[]): Round {
+  const { segments, found, system, solution } = outcome;
+  const zeroRad = zeroOf(round.scale, segments, found);
+  const moves = round.scale.kind === 'spot' && Math.abs(zeroRad) > settledZeroRad;
+  const scale = moves && round.scale.kind === 'spot' ? withZero(round.scale, spotOfAngle(round.scale, zeroRad)) : round.scale;
+  const ringDown = found?.fit.alpha;
+  const shifts = system === null ? round.shifts : shiftsAt(system, segments, solution);
+  return {
+    scale,
+    averages: moves ? averagesOn(scale) : round.averages,
+    start:
+      found === null || found.ringDown === null || ringDown === undefined
+        ? round.start
+        : { omega: ringDown[0] as number, gamma: ringDown[1] as number },
+    shifts,
+    bias: found === null || system === null || solution === null ? null : curvatureBias(segments, found, { system, solution, shifts }),
+  };
+}
+
+function hasSettled({ free, reversal }: FitOutcome, round: Round, next: Round): boolean {
+  const omegaSquared = free.omega0Squared.value;
+  const stiffness = next.shifts.every((shift, i) => Math.abs(shift - (round.shifts[i] as number)) < settledRelative * omegaSquared);
+  const size = settledRelative * Math.abs(reversal?.value ?? 0);
+  const bias = (next.bias?.centres ?? []).every((value, i) => Math.abs(value - (round.bias?.centres[i] ?? 0)) <= size);
+  const frequency = Math.abs((next.bias?.omega ?? 0) - (round.bias?.omega ?? 0)) <= settledRelative * Math.sqrt(omegaSquared);
+  return stiffness && bias && frequency && next.scale === round.scale;
+}
+
+function fitOnce(question: FitQuestion, { scale, averages, start, shifts, bias }: Round): FitOutcome {
+  const { archive, plan, measured, samples } = question;
+  const segments = samples.map((one, i) => ({
     window: one.window,
-    averages: averagedAngles(one, scale, widthS),
+    averages: averages[i] as BoxAverages,
     shift: shifts[i] as number,
+    centreS: one.centreS,
   }));
-  const data = segments.map(({ averages, window, shift }, i) => ({
-    tS: averages.t,
-    y: averages.y,
-    weight: averages.weight,
-    centreS: question.samples[i]?.centreS as number,
-    shift,
-  }));
-  const found = data.length === 0 ? null : fitRingDown(data, start, heldOf(measured));
+  const data = segments.map(({ averages: { t, y, weight }, shift, centreS }) => ({ tS: t, y, weight, centreS, shift }));
+  const raw = data.length === 0 ? null : fitRingDown(data, start, heldOf(measured));
+  const found = raw === null || bias === null ? raw : withoutBias(raw, bias);
   const free = combine(found?.ringDown ?? null, measured);
   if (free === null) {
-    throw new UnusableArchive(
-      { file: null },
-      'nothing tells the period: the dwells hold no ringing that could be fitted, and rig.json gives no measured.period_s',
-    );
+    const why = 'the dwells hold no ringing that could be fitted, and rig.json gives no measured.period_s';
+    throw new UnusableArchive({ file: null }, `nothing tells the period: ${why}`);
   }
   const reversal = found === null ? null : reversalOf(segments, found, { kind: plan.drift, order: plan.order });
   const system = gSystem({ rig: archive.rig, stationsOf: archive.rig, segments, found, measured, free, reversal });
-  const solution =
-    system === null || reversal === null || archive.rig.sources.shape === 'none' ? null : solveG(system, CODATA_2022_G.value);
-  const next = system === null ? [...shifts] : shiftsAt(system, segments, solution);
-  return { outcome: { segments, scale, found, free, reversal, solution, system }, shifts: next, zeroRad: zeroOf(scale, segments, found) };
+  const noG = system === null || reversal === null || archive.rig.sources.shape === 'none';
+  return { segments, scale, found, free, reversal, solution: noG ? null : solveG(system, CODATA_2022_G.value), system };
 }
 
 /** Without a G of its own the run is freed of the sources' stiffness with the recommended G. */

@@ -17,8 +17,18 @@ export interface RingDownResult {
   gammaByShift: number[];
 }
 
+/** What a fit by the linear model is off by. */
+export interface FitBias {
+  /** Of each segment's centre, rad. */
+  centres: number[];
+  omega: number;
+  gamma: number;
+}
+
 export interface DwellFit {
   fit: SeparableFit;
+  /** Taken off the centres and off the ring-down; null while it is not known. */
+  bias: FitBias | null;
   /** Null where the dwells hold no ringing to speak of and ω, γ were held at the measured ones. */
   ringDown: RingDownResult | null;
   /** Covariance of the (ω, γ) that the centres were fitted with. */
@@ -40,6 +50,7 @@ export function fitRingDown(data: readonly RingDownData[], start: RingDownStart 
       const alphaCovariance = honestCovariance(fit);
       return {
         fit,
+        bias: null,
         alphaCovariance,
         ringDown: {
           ...shiftDerivatives(fit),
@@ -52,7 +63,12 @@ export function fitRingDown(data: readonly RingDownData[], start: RingDownStart 
     }
   }
   if (measured === null) return null;
-  return { fit: solveAtFixedAlpha(segments, [measured.omega, measured.gamma]), ringDown: null, alphaCovariance: measured.covariance };
+  return {
+    fit: solveAtFixedAlpha(segments, [measured.omega, measured.gamma]),
+    bias: null,
+    ringDown: null,
+    alphaCovariance: measured.covariance,
+  };
 }
 
 /** ω (rad/s) and γ (1/s) known from elsewhere, with their covariance. */
@@ -116,11 +132,15 @@ export interface CentreFit {
   shift: number[];
 }
 
-/** Fitted centre of a segment, rad, with its uncertainty from the residuals and from ω and γ. */
+/** Centre of a segment, rad, freed of the model's bias where it is known, with its uncertainty from the residuals and from ω and γ. */
 export function centreOf(found: DwellFit, index: number): CentreFit {
   const segment = found.fit.segments[index];
   if (segment === undefined) throw new Error(`there is no segment ${index}`);
   const shift = segment.shift[offset] as number[];
   const own = Number.isFinite(found.fit.variance) ? found.fit.variance * at(segment.inverseNormal, offset, offset) : 0;
-  return { value: segment.coefficients[offset] as number, u: Math.sqrt(own + bilinear(shift, found.alphaCovariance, shift)), shift };
+  return {
+    value: (segment.coefficients[offset] as number) - (found.bias?.centres[index] ?? 0),
+    u: Math.sqrt(own + bilinear(shift, found.alphaCovariance, shift)),
+    shift,
+  };
 }

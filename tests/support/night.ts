@@ -4,9 +4,8 @@ import type { RigDocument } from '@/shared/rig/document';
 import { wideRig } from './reference-rigs';
 
 /**
- * A night of an exactly known rig, written without the program's own physics: point masses summed as vectors, the beam
- * as the closed form of a rod's potential differentiated numerically would be too slow, so it is Gauss–Legendre points; the motion by
- * Runge–Kutta steps of the exact equation.
+ * A night of an exactly known rig, written without the program's own physics: attraction between points, the beam as 16
+ * Gauss–Legendre points, the motion by Runge–Kutta steps of the exact equation.
  */
 export interface NightPlan {
   rig?: RigDocument;
@@ -44,7 +43,11 @@ const gauss8 = [
 
 function pointsOf({ pendulum }: RigDocument): Mass[] {
   const half = pendulum.beamLength.value / 2;
-  const beam = gauss8.flatMap(([x, w]) => [0.5, -0.5].flatMap((middle) => [1, -1].map((side) => ({ massKg: (pendulum.beamMass.value * w) / 4, radiusM: half * (middle + (side * x) / 2) }))));
+  const beam = gauss8.flatMap(([x, w]) =>
+    [0.5, -0.5].flatMap((middle) =>
+      [1, -1].map((side) => ({ massKg: (pendulum.beamMass.value * w) / 4, radiusM: half * (middle + (side * x) / 2) })),
+    ),
+  );
   return [1, -1].map((side) => ({ massKg: pendulum.ballMass.value, radiusM: side * pendulum.arm.value })).concat(beam);
 }
 
@@ -60,8 +63,9 @@ function attraction(rig: RigDocument, bigG: number, inertia: number): (psiRad: n
     const sy = orbit * Math.sin(psiRad);
     let torque = 0;
     for (const { massKg, radiusM } of points) {
-      const near = Math.hypot(sx - radiusM, sy, height);
-      const far = Math.hypot(sx + radiusM, sy, height);
+      const across = sy * sy + height * height;
+      const near = Math.sqrt((sx - radiusM) ** 2 + across);
+      const far = Math.sqrt((sx + radiusM) ** 2 + across);
       torque += massKg * radiusM * sy * (1 / (near * near * near) - 1 / (far * far * far));
     }
     return scale * torque;
@@ -108,13 +112,27 @@ export function night(plan: NightPlan): BuildArchiveInput {
   const moves = movesOf(plan, limits);
   const last = moves.at(-1);
   const endS = last === undefined ? plan.dwellS : last.startS + last.durationS + plan.dwellS;
-  const { utcMs, theta } = integrate(plan, rig, (tS) => {
-    const move = moves.findLast((one) => one.startS <= tS);
-    return move === undefined ? (plan.anglesDeg[0] as number) : angleAt(move, tS, limits);
-  }, endS);
+  const { utcMs, theta } = integrate(
+    plan,
+    rig,
+    (tS) => {
+      const move = moves.findLast((one) => one.startS <= tS);
+      return move === undefined ? (plan.anglesDeg[0] as number) : angleAt(move, tS, limits);
+    },
+    endS,
+  );
   const reading = plan.reading ?? ((angle: number) => angle);
   return {
-    run: { runId: 'night', outcome: 'finished', operator: 'Wren Alder', startedAtUtcMs: nightStartUtcMs, endedAtUtcMs: nightStartUtcMs + endS * 1000, notes: '', massSetLabel: 'lead', simulated: null },
+    run: {
+      runId: 'night',
+      outcome: 'finished',
+      operator: 'Wren Alder',
+      startedAtUtcMs: nightStartUtcMs,
+      endedAtUtcMs: nightStartUtcMs + endS * 1000,
+      notes: '',
+      massSetLabel: 'lead',
+      simulated: null,
+    },
     rig,
     protocol: plan.protocol ?? { formatVersion: 1, name: 'Night', steps: [{ kind: 'home' }] },
     steps: moves.flatMap((move, k) => rowsOf(move, plan, 2 * k + 1)),
@@ -135,17 +153,47 @@ function rowsOf(move: Move, plan: NightPlan, seq: number): StepRow[] {
   const instant = (tS: number) => nightStartUtcMs + tS * 1000;
   const [start, middle, end] = [move.startS, move.startS + move.durationS, move.startS + move.durationS + plan.dwellS];
   const base = { label: '', station: '', uStartS: 0, uEndS: 0, outcome: 'done' as const, angleSource: 'counted' as const, uAngleDeg: 0 };
-  const times = (from: number, to: number) => ({ plannedStartUtcMs: instant(from), plannedEndUtcMs: instant(to), startUtcMs: instant(from), endUtcMs: instant(to) });
+  const times = (from: number, to: number) => ({
+    plannedStartUtcMs: instant(from),
+    plannedEndUtcMs: instant(to),
+    startUtcMs: instant(from),
+    endUtcMs: instant(to),
+  });
   const rows: StepRow[] = [
-    { ...base, seq, path: `1.repeat[${seq}].1.swing`, kind: 'swing', ...times(start, middle), angleStartDeg: move.fromDeg, angleEndDeg: move.toDeg, good: null },
-    { ...base, seq: seq + 1, path: `1.repeat[${seq}].2.dwell`, kind: 'dwell', ...times(middle, end), angleStartDeg: move.toDeg, angleEndDeg: move.toDeg, good: true },
+    {
+      ...base,
+      seq,
+      path: `1.repeat[${seq}].1.swing`,
+      kind: 'swing',
+      ...times(start, middle),
+      angleStartDeg: move.fromDeg,
+      angleEndDeg: move.toDeg,
+      good: null,
+    },
+    {
+      ...base,
+      seq: seq + 1,
+      path: `1.repeat[${seq}].2.dwell`,
+      kind: 'dwell',
+      ...times(middle, end),
+      angleStartDeg: move.toDeg,
+      angleEndDeg: move.toDeg,
+      good: true,
+    },
   ];
   return rows.map((row) => ({ ...row, ...plan.row?.(row) }));
 }
 
-function integrate(plan: NightPlan, rig: RigDocument, angleDegAt: (tS: number) => number, endS: number): { utcMs: Float64Array; theta: Float64Array } {
+function integrate(
+  plan: NightPlan,
+  rig: RigDocument,
+  angleDegAt: (tS: number) => number,
+  endS: number,
+): { utcMs: Float64Array; theta: Float64Array } {
   const { pendulum } = rig;
-  const inertia = 2 * pendulum.ballMass.value * (pendulum.arm.value ** 2 + 0.4 * pendulum.ballRadius.value ** 2) + (pendulum.beamMass.value * pendulum.beamLength.value ** 2) / 12;
+  const inertia =
+    2 * pendulum.ballMass.value * (pendulum.arm.value ** 2 + 0.4 * pendulum.ballRadius.value ** 2) +
+    (pendulum.beamMass.value * pendulum.beamLength.value ** 2) / 12;
   const gamma = 1 / (plan.decayTimeS ?? 1067.4302650055924);
   const omega0Squared = ((2 * Math.PI) / (plan.periodS ?? 420)) ** 2 + gamma ** 2;
   const pull = attraction(rig, plan.bigG ?? 6.6743e-11, inertia);
