@@ -81,7 +81,7 @@ export function homeDurationS(rig: RigDocument, fromDeg: number): number {
 }
 
 /** The rig's damped period with the sources away, s. @throws UnplayableStep where it has not been measured. */
-export function periodOf(rig: RigDocument): number {
+function periodOf(rig: RigDocument): number {
   const period = rig.measured?.period_s?.value;
   if (period === undefined) throw new UnplayableStep('period-missing', 'Lengths in periods need measured.period_s in the rig document.');
   return period;

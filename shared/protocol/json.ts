@@ -3,7 +3,7 @@ import { documentFields, protocolDocumentSchema, type ProtocolDocument, type Ste
 import { fieldNotes, kindNotes } from './schema-notes';
 
 /** Address of the published schema, below the server's root. */
-export const schemaPath = '/schemas/protocol-1.json';
+const schemaPath = '/schemas/protocol-1.json';
 
 /**
  * The text of a protocol file: two spaces of indentation, fields in the order of the format, a newline at the end. The same document

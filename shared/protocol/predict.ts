@@ -177,7 +177,7 @@ function addMove(item: TimelineItem, periodS: number, add: (untilMs: number, ang
         });
   for (let piece = 0; piece < pieces; piece += 1) {
     const fraction = (piece + 0.5) / pieces;
-    const angleDeg = move?.angleDegAt(fraction * durationS) ?? item.angleFromDeg + fraction * (item.angleToDeg - item.angleFromDeg);
+    const angleDeg = move?.angleDegAt(fraction * move.durationS) ?? item.angleFromDeg + fraction * (item.angleToDeg - item.angleFromDeg);
     add(item.startUtcMs + ((piece + 1) / pieces) * (item.endUtcMs - item.startUtcMs), angleDeg);
   }
 }

@@ -26,7 +26,7 @@ export interface PlanState {
  * the kinds that are not built yet count as none.
  * @throws UnplayableStep where the step cannot be carried out on the rig.
  */
-export function stateAfter(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone'>, state: PlanState): PlanState {
+function stateAfter(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone'>, state: PlanState): PlanState {
   const { rig, timeZone } = plan;
   const at = (utcMs: number, angleDeg = state.angleDeg): PlanState => ({ utcMs, angleDeg, swingStartUtcMs: null });
   switch (step.kind) {
