@@ -58,7 +58,7 @@ export async function rehearse({ start, startUtcMs }: RehearsalInput, parts: Reh
   };
   clock.after(SAMPLE_BATCH_MS, sampleOn);
   scheduleFaults(simulated.faults, { clock, controller, killServer: () => server.kill() });
-  server.driver.start();
+  server.begin();
   await clock.advance(LONGEST_MS, () => server.hasEnded());
   sample();
   return result(server, deflection.series());
@@ -93,8 +93,8 @@ interface ServerParts extends RehearsalParts {
 /** The process that drives the run: it can be killed, and another takes the run up from what was saved. */
 class RehearsalServer {
   readonly store: RehearsalStore;
-  driver: RunDriver;
   private link: TurntableLink;
+  private present: RunDriver | null = null;
   private epoch = 1;
   private away = false;
 
@@ -104,7 +104,17 @@ class RehearsalServer {
   ) {
     this.store = new RehearsalStore(start);
     this.link = this.openLink();
-    this.driver = this.newDriver(null);
+  }
+
+  /** The driver that has the run, or had it last. */
+  get driver(): RunDriver {
+    if (this.present === null) throw new Error('the rehearsal has not begun');
+    return this.present;
+  }
+
+  begin(): void {
+    this.present = this.newDriver(null);
+    this.present.start();
   }
 
   get nowUtcMs(): number {
@@ -131,9 +141,9 @@ class RehearsalServer {
   private async comeBack(): Promise<void> {
     this.epoch += 1;
     this.link = this.openLink();
-    this.driver = this.newDriver(await this.store.load());
+    this.present = this.newDriver(await this.store.load());
     this.away = false;
-    this.driver.recover();
+    this.present.recover();
   }
 
   private openLink(): TurntableLink {
