@@ -46,7 +46,7 @@ module.exports = [
     settings: {
       'boundaries/root-path': __dirname,
       'boundaries/include': [`{app,components,shared,firmware-protocol,db,server,tests}/${code}`],
-      'boundaries/elements': everything.map((name) => ({ type: name, partialMatch: false, pattern: `${name}/**/*` })),
+      'boundaries/elements': everything.map((name) => ({ type: name, partialMatch: false, pattern: name })),
       'import/resolver': { typescript: { project: __dirname } },
     },
     rules: {
