@@ -16,6 +16,8 @@ export interface DeflectionPlotProps {
   bands?: readonly StepBand[] | undefined;
   heightPx?: number | undefined;
   title: string;
+  /** The whole time that may be shown, when the data given are only a part of it. */
+  whole?: TimeSpan | undefined;
   /** Called when the shown part changes, so that finer data may be fetched. */
   onWindow?: ((fromUtcMs: number, toUtcMs: number) => void) | undefined;
 }

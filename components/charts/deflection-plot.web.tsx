@@ -15,7 +15,9 @@ export function DeflectionPlot(props: DeflectionPlotProps) {
   const { utcMs, value, unit, timeZone, title, heightPx = 260, bands, onWindow } = props;
   const { colors } = useTheme();
   const host = useRef<HTMLDivElement | null>(null);
-  const whole = useMemo<TimeSpan>(() => ({ from: utcMs[0] ?? 0, to: Math.max((utcMs[0] ?? 0) + 1, utcMs[utcMs.length - 1] ?? 1) }), [utcMs]);
+  const from = props.whole?.from ?? utcMs[0] ?? 0;
+  const to = Math.max(from + 1, props.whole?.to ?? utcMs[utcMs.length - 1] ?? 1);
+  const whole = useMemo<TimeSpan>(() => ({ from, to }), [from, to]);
   const [span, setSpan] = useState<TimeSpan>(whole);
   const [cursor, setCursor] = useState<number | null>(null);
   useEffect(() => setSpan((before) => (before.from >= whole.from && before.to <= whole.to && before.to - before.from > 1 ? before : whole)), [whole]);

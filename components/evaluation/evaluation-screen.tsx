@@ -62,7 +62,7 @@ function Evaluated({ view, evaluation, result, panel, back }: EvaluatedProps) {
       asideOnlyWide
       aside={
         <>
-          {fit}
+          <View className="sticky top-0 z-10 bg-ink pb-2">{fit}</View>
           {dwells}
         </>
       }

@@ -13,7 +13,7 @@ export function UncertainText({ size = 15, options, testID, ...quantity }: Uncer
   const parts = uncertainParts(quantity, options);
   const small = size >= 30 ? 20 : size >= 20 ? 15 : 13;
   return (
-    <Text role="text" aria-label={spokenUncertain(quantity, options)} testID={testID}>
+    <Text role="img" aria-label={spokenUncertain(quantity, options)} testID={testID}>
       <Num size={size} light={size >= 30}>
         {parts.value}
       </Num>
@@ -33,7 +33,7 @@ export function LargeG({ value, u, unit, testID }: Uncertain & { testID?: string
   const quantity = { value, u, unit };
   const parts = uncertainParts(quantity);
   return (
-    <View role="text" aria-label={`G is ${spokenUncertain(quantity)}`} className="flex-row flex-wrap items-baseline gap-x-2" testID={testID}>
+    <View role="img" aria-label={`G is ${spokenUncertain(quantity)}`} className="flex-row flex-wrap items-baseline gap-x-2" testID={testID}>
       <Text>
         <Num size={44} light>
           {parts.value}

@@ -31,7 +31,7 @@ export function EditorFooter({ protocol, status, onOpen }: EditorFooterProps) {
         {issued && rig !== null && mayStart ? (
           <Button size="action" kind="primary" icon="start" label="Start" accessibilityLabel={`Start revision ${protocol.latestRevision ?? 1} on ${rig.name}`} onPress={start} className="flex-1 px-2" testID="start-revision" />
         ) : (
-          <Button size="action" kind="primary" label={`Issue revision ${(protocol.latestRevision ?? 0) + 1}`} disabled={issued} onPress={() => onOpen('issue')} className="flex-1 px-2" testID="issue" />
+          <Button size="action" kind="primary" label={`Issue rev ${(protocol.latestRevision ?? 0) + 1}`} disabled={issued} onPress={() => onOpen('issue')} className="flex-1 px-2" testID="issue" />
         )}
       </View>
     </View>

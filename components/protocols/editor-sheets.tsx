@@ -47,7 +47,7 @@ export function EditorSheets({ open, onOpen, protocol, sync, details }: EditorSh
     case 'rehearse':
       return <RehearseSheet protocolId={protocol.id} sync={sync} onClose={close} />;
     case 'more':
-      return <MoreSheet protocol={protocol} sync={sync} onClose={close} />;
+      return <MoreSheet protocol={protocol} sync={sync} onClose={close} onDetails={() => onOpen('protocol')} />;
     case null:
       return null;
   }

@@ -21,13 +21,10 @@ export function EditorTrailing({ protocol, status, onOpen }: EditorTrailingProps
   return (
     <View className="flex-row items-center gap-1">
       <SaveChip status={status} revision={draftWords(protocol)} />
-      <View className="wide:hidden">
-        <IconButton icon="edit" label="Details of the protocol" onPress={() => onOpen('protocol')} testID="open-protocol-details" />
-      </View>
       <View className="hidden wide:flex">
         <IconButton icon="edit" label="Details of the protocol" onPress={() => select(null)} />
       </View>
-      <IconButton icon="more" label="More: revisions, export, delete" onPress={() => onOpen('more')} testID="open-more" />
+      <IconButton icon="more" label="More: details, revisions, export" onPress={() => onOpen('more')} testID="open-more" />
     </View>
   );
 }

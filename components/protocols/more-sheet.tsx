@@ -14,10 +14,11 @@ interface MoreSheetProps {
   protocol: ProtocolView;
   sync: DraftSync;
   onClose: () => void;
+  onDetails: () => void;
 }
 
 /** What is done to a protocol as a whole: revisions, export, a copy, deletion while it was never issued. */
-export function MoreSheet({ protocol, sync, onClose }: MoreSheetProps) {
+export function MoreSheet({ protocol, sync, onClose, onDetails }: MoreSheetProps) {
   const { document, mayWrite } = useEditor();
   const router = useRouter();
   const go = async (href: string) => {
@@ -29,6 +30,7 @@ export function MoreSheet({ protocol, sync, onClose }: MoreSheetProps) {
   return (
     <Sheet open title={document.name} onClose={onClose} testID="more-sheet">
       <View className="gap-2">
+        <Button icon="edit" label="Name, interruption, end, planned start" onPress={onDetails} testID="open-protocol-details" />
         <Button icon="compare" label={`Revisions (${protocol.revisions.length}) and comparison`} onPress={() => void go(`/protocols/${protocol.id}/revisions`)} testID="open-revisions" />
         <Button icon="export" label="Save as JSON" onPress={() => saveTextFile(`${fileNameOf(document.name)}.protocol.json`, exportProtocolText(document))} testID="export-protocol" />
         {mayWrite ? <Button icon="duplicate" label="Make a copy" busy={copy.isPending} onPress={() => copy.mutate({ body: { document: { ...document, name: `${document.name}, copy`.slice(0, 120) } } })} testID="copy-protocol" /> : null}

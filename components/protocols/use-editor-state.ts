@@ -1,12 +1,10 @@
 import { useMemo, useReducer } from 'react';
-import { useToast } from '@/components/ui';
 import type { ProtocolDocument, Step } from '@/shared/protocol/document';
 import { changeDocument, duplicateStep, insertStep, moveStepDown, moveStepUp, nestInRepeat, removeStep, replaceStep, unnest, type Edited } from '@/shared/protocol/edit';
 import { canRedo, canUndo } from '@/shared/protocol/history';
 import { stepAt, type StepPath } from '@/shared/protocol/step-path';
 import type { EditorApi } from './editor-context';
 import { beginEditor, editorReducer } from './editor-reducer';
-import { stepTitle } from './step-words';
 
 type EditorActs = Omit<EditorApi, 'plan' | 'rig' | 'timeZone' | 'mayWrite' | 'openDetails'>;
 
@@ -20,18 +18,11 @@ function placeFor(document: ProtocolDocument, selected: StepPath | null, place: 
 /** The draft under edit with everything that can be done to it. */
 export function useEditorState(begin: ProtocolDocument): EditorActs {
   const [state, dispatch] = useReducer(editorReducer, begin, beginEditor);
-  const toast = useToast();
   const document = state.history.present;
   const { selected } = state;
   return useMemo(() => {
     const change = (edited: Edited, mergeKey?: string) => dispatch({ kind: 'change', edited, ...(mergeKey === undefined ? {} : { mergeKey }) });
     const onSelected = (operation: (document: ProtocolDocument, path: StepPath) => Edited) => () => (selected === null ? undefined : change(operation(document, selected)));
-    const removeSelected = () => {
-      const step = selected === null ? null : stepAt(document, selected);
-      if (selected === null || step === null) return;
-      change(removeStep(document, selected));
-      toast.show({ text: `${stepTitle(step)} is deleted.`, undo: () => dispatch({ kind: 'undo' }) });
-    };
     return {
       document,
       selected,
@@ -46,9 +37,9 @@ export function useEditorState(begin: ProtocolDocument): EditorActs {
       nest: onSelected((draft, path) => nestInRepeat(draft, path)),
       unnest: onSelected(unnest),
       duplicate: onSelected(duplicateStep),
-      remove: removeSelected,
+      remove: onSelected(removeStep),
       changeDocument: (fields, mergeKey) => dispatch({ kind: 'document', document: changeDocument(document, fields), ...(mergeKey === undefined ? {} : { mergeKey }) }),
       putDocument: (next) => dispatch({ kind: 'document', document: next }),
     };
-  }, [document, selected, state.history, toast]);
+  }, [document, selected, state.history]);
 }

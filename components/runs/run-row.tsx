@@ -1,6 +1,6 @@
 import { Link, type Href } from 'expo-router';
 import { View } from 'react-native';
-import { Body, Chip, Icon, Label, Num } from '@/components/ui';
+import { Body, Icon, Label, Num } from '@/components/ui';
 import type { RunSummary } from '@/shared/contracts/runs';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { formatClock, formatDay } from '@/shared/lib/format-time';
@@ -27,11 +27,11 @@ export function RunRow({ run, timeZone, last }: RunRowProps) {
             {run.protocolName}
           </Body>
           <Label numberOfLines={1}>
+            {run.rehearsal ? 'Rehearsal, ' : ''}
             {run.rigName}
             {run.protocolRevision > 0 ? `, revision ${run.protocolRevision}` : ', draft'}
           </Label>
         </View>
-        {run.rehearsal ? <Chip tone="lamp">rehearsal</Chip> : null}
         <View className="flex-none items-end">
           <Body size={13} tone={isOver(run.state) ? 'dim' : 'lamp'}>
             {stateWord(run.state)}

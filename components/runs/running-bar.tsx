@@ -3,7 +3,7 @@ import { View } from 'react-native';
 import { useLabQuery } from '@/components/api';
 import { Body, Icon, Label } from '@/components/ui';
 import { listRuns, type RunSummary } from '@/shared/contracts/runs';
-import { stateMark, stateWord } from './run-words';
+import { isOver, stateMark, stateWord } from './run-words';
 
 const everyMs = 5000;
 
@@ -11,7 +11,7 @@ const everyMs = 5000;
 export function RunningBar() {
   const pathname = usePathname();
   const { data } = useLabQuery(listRuns, { query: { active: 'true', limit: 20 }, everyMs });
-  const runs = (data?.data.items ?? []).filter((run) => !run.rehearsal && pathname !== `/runs/${run.id}`);
+  const runs = (data?.data.items ?? []).filter((run) => !run.rehearsal && !isOver(run.state) && pathname !== `/runs/${run.id}`);
   if (runs.length === 0) return null;
   return (
     <View role="navigation" aria-label="Running now" className="flex-none border-b border-line bg-panel2" testID="running-bar">

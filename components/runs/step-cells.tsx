@@ -20,24 +20,26 @@ export function InstantCell({ plannedUtcMs, actualUtcMs, uS, base }: { plannedUt
   const off = delayS !== null && Math.abs(delayS) >= 1;
   return (
     <View>
-      <Num size={15}>{actualUtcMs === null ? 'running' : clockText(actualUtcMs, uS, base)}</Num>
-      <View className="flex-row flex-wrap gap-x-2">
+      <View className="flex-row flex-wrap items-baseline gap-x-2">
+        <Num size={15}>{actualUtcMs === null ? 'running' : clockText(actualUtcMs, uS, base)}</Num>
         {actualUtcMs === null || uS === null ? null : (
           <Num size={13} tone="dim">
             {formatTimeUncertainty(uS)}
           </Num>
         )}
-        {plannedUtcMs === null ? null : (
-          <Num size={13} tone="dim">
-            plan {clockText(plannedUtcMs, 1.5, base).slice(0, 8)}
-          </Num>
-        )}
-        {delayS === null ? null : (
-          <Num size={13} tone={off ? 'lamp' : 'dim'} strong={off}>
-            {formatDelay(delayS)}
-          </Num>
-        )}
       </View>
+      {plannedUtcMs === null ? null : (
+        <View className="flex-row flex-wrap items-baseline gap-x-2">
+          <Label>
+            plan <Num size={13} tone="dim">{clockText(plannedUtcMs, 1.5, base).slice(0, 8)}</Num>
+          </Label>
+          {delayS === null ? null : (
+            <Num size={13} tone={off ? 'lamp' : 'dim'} strong={off}>
+              {formatDelay(delayS)}
+            </Num>
+          )}
+        </View>
+      )}
     </View>
   );
 }
@@ -47,14 +49,15 @@ export function AngleCell({ row }: { row: StepRowView }) {
   const moved = row.angleStartDeg !== null && row.angleEndDeg !== null && Math.abs(row.angleEndDeg - row.angleStartDeg) > 0.05;
   return (
     <View>
-      <Num size={15}>
-        {moved ? `${formatDegrees(row.angleStartDeg)} → ` : ''}
-        {formatDegrees(row.angleEndDeg ?? row.angleStartDeg, 3)}
-      </Num>
-      <Label>
-        {row.uAngleDeg === null ? '' : `± ${row.uAngleDeg}° · `}
-        {row.angleSource}
-      </Label>
+      <View className="flex-row flex-wrap items-baseline gap-x-2">
+        <Num size={15}>{formatDegrees(row.angleEndDeg ?? row.angleStartDeg, 3)}</Num>
+        {row.uAngleDeg === null ? null : (
+          <Num size={13} tone="dim">
+            ± {row.uAngleDeg}°
+          </Num>
+        )}
+      </View>
+      <Label className="whitespace-nowrap">{moved ? `from ${formatDegrees(row.angleStartDeg)}` : row.angleSource}</Label>
     </View>
   );
 }
@@ -76,8 +79,10 @@ export function OutcomeCell({ row }: { row: StepRowView }) {
 export function TitleCell({ row }: { row: StepRowView }) {
   const mark = stepMark(row);
   return (
-    <View className="min-w-0 flex-row items-center gap-2.5">
-      <Icon name={mark.icon} size={15} tone={mark.tone === 'on-lamp' ? 'onLamp' : mark.tone} />
+    <View className="min-w-0 flex-row items-start gap-2.5">
+      <View className="pt-[3px]">
+        <Icon name={mark.icon} size={15} tone={mark.tone === 'on-lamp' ? 'onLamp' : mark.tone} />
+      </View>
       <View className="min-w-0 shrink">
         <Body>{stepTitle(row)}</Body>
         <Label className="font-mono">

@@ -52,7 +52,9 @@ function LoggedSteps({ rows, events, timeZone }: { rows: readonly StepRowView[];
         <Label>
           {shown.length === rows.length ? `${rows.length} rows` : `${shown.length} of ${rows.length} rows`}, times in {zone === 'utc' ? 'UTC' : zoneName(timeZone)}
         </Label>
-        <Tabs label="Times in" value={zone} onChange={setZone} options={[{ value: 'lab', label: 'Lab time' }, { value: 'utc', label: 'UTC' }]} />
+        <View className="w-[220px]">
+          <Tabs label="Times in" value={zone} onChange={setZone} options={[{ value: 'lab', label: 'Lab time' }, { value: 'utc', label: 'UTC' }]} />
+        </View>
       </View>
       {shown.length === 0 ? <Empty title="No row like that" icon="filter" action={{ label: 'Show all rows', onPress: () => setFilter(noFilter) }} /> : wide ? <StepTable {...list} /> : <StepCards {...list} />}
       <Panel>

@@ -38,7 +38,7 @@ export function Screen({ title, back, trailing, children, footer, aside, asideOn
         </ScrollView>
         {footer === undefined ? null : (
           <View className="border-t border-line bg-ink">
-            <View className={`${gutter} py-3`}>{footer}</View>
+            <View className={`${gutter} py-2`}>{footer}</View>
           </View>
         )}
       </View>

@@ -1,0 +1,81 @@
+import type { ImportCheck, ImportMapping, ImportView } from '@/shared/contracts/data';
+import type { MappingKey, RememberedMapping } from './remembered-mapping';
+
+/** An import as the person fills it in: nothing typed is lost by an error or a new answer. Pure. */
+
+/** Null: the file does not tell and the person has not said it yet. */
+export type MappingDraft = { [K in Exclude<keyof ImportMapping, 'elapsedFrom' | 'timesWithoutZoneAreUtc'>]: ImportMapping[K] | null } & {
+  elapsedFrom: string;
+  /** Whether times that name no zone are UTC; null while the file has such times and nobody has said so. */
+  timesWithoutZoneAreUtc: boolean | null;
+};
+
+export interface ImportState {
+  /** The import on the server once the file is there. */
+  imported: ImportView | null;
+  draft: MappingDraft | null;
+  /** What the file left open; marked on the form until it is stated. */
+  ambiguous: readonly MappingKey[];
+  /** The mapping was filled in as last time. */
+  remembered: boolean;
+  channelName: string;
+  /** The check of exactly the present mapping. */
+  check: ImportCheck | null;
+}
+
+export type ImportAction =
+  | { kind: 'received'; imported: ImportView; remembered: RememberedMapping | null }
+  | { kind: 'changed'; change: Partial<MappingDraft> }
+  | { kind: 'named'; channelName: string }
+  | { kind: 'checked'; check: ImportCheck }
+  | { kind: 'another-file' };
+
+export const noImport = (channelName: string): ImportState => ({ imported: null, draft: null, ambiguous: [], remembered: false, channelName, check: null });
+
+export function importReducer(state: ImportState, action: ImportAction): ImportState {
+  switch (action.kind) {
+    case 'received':
+      return received(state, action.imported, action.remembered);
+    case 'changed':
+      return state.draft === null ? state : { ...state, draft: { ...state.draft, ...action.change }, check: null };
+    case 'named':
+      return { ...state, channelName: action.channelName };
+    case 'checked':
+      return { ...state, check: action.check };
+    case 'another-file':
+      return noImport(state.channelName);
+  }
+}
+
+const fieldWords: Record<MappingKey, string> = {
+  delimiter: 'what parts the columns', decimal: 'the decimal sign', headerRow: 'whether the first row holds names', timeColumn: 'the column of the time', timeFormat: 'how the time is written', elapsedFrom: 'when time 0 was',
+  timesWithoutZoneAreUtc: 'which zone the times are in', valueColumn: 'the column of the deflection', unit: 'the unit of the deflection',
+};
+
+function received(state: ImportState, imported: ImportView, remembered: RememberedMapping | null): ImportState {
+  const preview = imported.preview;
+  if (preview === null) return { ...state, imported, draft: null, check: null };
+  const ambiguous = preview.ambiguous.filter((key): key is MappingKey => key in fieldWords);
+  const names = preview.columns.map((column) => column.name);
+  const fits = remembered !== null && remembered.columns.length === names.length && remembered.columns.every((name, index) => name === names[index]);
+  const guessed = { elapsedFrom: '', timesWithoutZoneAreUtc: false, ...preview.mapping };
+  const open = Object.fromEntries(ambiguous.filter((key) => key !== 'elapsedFrom').map((key) => [key, null]));
+  const draft: MappingDraft = fits ? { ...guessed, ...remembered.mapping, elapsedFrom: '' } : { ...guessed, ...open };
+  return { ...state, imported, draft, ambiguous: fits ? [] : ambiguous, remembered: fits, check: null };
+}
+
+
+/** ISO 8601 in UTC with Z, as the archive writes it. */
+export const isInstant = (text: string): boolean => /^\d{4}-\d\d-\d\dT\d\d:\d\d(:\d\d(\.\d+)?)?Z$/.test(text) && Number.isFinite(Date.parse(text));
+
+/** The mapping once all is stated; before that, what is still missing, in words. */
+export function completeMapping(draft: MappingDraft): { mapping: ImportMapping; missing: null } | { mapping: null; missing: string[] } {
+  const { elapsedFrom, timesWithoutZoneAreUtc: utc, ...rest } = draft;
+  const missing = (Object.keys(rest) as (keyof typeof rest)[]).filter((key) => rest[key] === null).map((key) => fieldWords[key]);
+  if (draft.timeFormat === 'elapsed-s' && !isInstant(elapsedFrom)) missing.push(fieldWords.elapsedFrom);
+  if (draft.timeFormat === 'iso' && utc === null) missing.push(fieldWords.timesWithoutZoneAreUtc);
+  if (draft.timeColumn !== null && draft.timeColumn === draft.valueColumn) missing.push('two different columns for time and deflection');
+  if (missing.length > 0) return { mapping: null, missing };
+  const extra = { ...(draft.timeFormat === 'elapsed-s' ? { elapsedFrom } : {}), ...(draft.timeFormat === 'iso' && utc === true ? { timesWithoutZoneAreUtc: true } : {}) };
+  return { mapping: { ...(rest as ImportMapping), ...extra }, missing: null };
+}

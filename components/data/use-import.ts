@@ -1,0 +1,73 @@
+import { useQueryClient } from '@tanstack/react-query';
+import { useReducer, useState } from 'react';
+import { call, labKey, useLab, wordsOf } from '@/components/api';
+import { beginImport, checkImport, commitImport, putImportContent, readSamples } from '@/shared/contracts/data';
+import { completeMapping, importReducer, noImport } from './import-draft';
+import { readRemembered, remember } from './remembered-mapping';
+
+const headBytes = 65_536;
+
+export interface ImportFailure {
+  title: string;
+  detail: string;
+  errors: readonly { path: string; message: string }[];
+}
+
+type Step = 'sending' | 'checking' | 'storing' | null;
+
+/** An import from the choice of the file to the stored samples. Every failure leaves what was typed as it is. */
+export function useImport(runId: string, channelName: string) {
+  const { labId } = useLab();
+  const queries = useQueryClient();
+  const [state, dispatch] = useReducer(importReducer, channelName, noImport);
+  const [step, setStep] = useState<Step>(null);
+  const [failure, setFailure] = useState<ImportFailure | null>(null);
+  const [head, setHead] = useState('');
+  const [stored, setStored] = useState<{ stored: number; known: number; channel: string } | null>(null);
+
+  const attempt = async (which: Step, title: string, act: () => Promise<void>) => {
+    setStep(which);
+    setFailure(null);
+    try {
+      await act();
+    } catch (error) {
+      setFailure({ title, ...wordsOf(error) });
+    } finally {
+      setStep(null);
+    }
+  };
+  const mapping = state.draft === null ? null : completeMapping(state.draft);
+  const importId = state.imported?.id ?? '';
+
+  return {
+    state, step, failure, head, stored, mapping,
+    send: (file: File) =>
+      attempt('sending', `${file.name} was not taken in`, async () => {
+        setHead(await file.slice(0, headBytes).text());
+        const begun = await call(beginImport, { params: { labId, runId }, body: { fileName: file.name } });
+        const { data } = await call(putImportContent, { params: { labId, importId: begun.data.id }, raw: file });
+        dispatch({ kind: 'received', imported: data, remembered: readRemembered(labId) });
+      }),
+    change: (change: Parameters<typeof completeMapping>[0] extends infer D ? Partial<D> : never) => dispatch({ kind: 'changed', change }),
+    name: (name: string) => dispatch({ kind: 'named', channelName: name }),
+    check: () =>
+      attempt('checking', 'The file was not checked', async () => {
+        if (!mapping?.mapping) return;
+        const { data } = await call(checkImport, { params: { labId, importId }, body: { mapping: mapping.mapping } });
+        dispatch({ kind: 'checked', check: data });
+      }),
+    store: () =>
+      attempt('storing', 'Nothing was stored', async () => {
+        if (!mapping?.mapping) return;
+        const { data } = await call(commitImport, { params: { labId, importId }, body: { mapping: mapping.mapping, channelName: state.channelName } });
+        remember(labId, state.imported?.preview?.columns.map((column) => column.name) ?? [], mapping.mapping);
+        setStored({ stored: data.stored, known: data.known, channel: data.channel.name });
+        await queries.invalidateQueries({ queryKey: labKey(labId, readSamples) });
+      }),
+    anotherFile: () => {
+      dispatch({ kind: 'another-file' });
+      setStored(null);
+      setFailure(null);
+    },
+  };
+}
