@@ -1,6 +1,8 @@
 /** Three projects: pure code and server in Node, components in a DOM, the product in a real browser. */
 const alias = { '^@/(.*)$': '<rootDir>/$1' };
 const untransformed = ['/node_modules/(?!(lucia|@lucia-auth|@oslojs|pure-rand|fflate|temporal-polyfill|temporal-utils)/)'];
+const [expoUntransformed, ...otherUntransformed] = require('jest-expo/web/jest-preset').transformIgnorePatterns;
+const webUntransformed = [expoUntransformed.replace('(?!(', '(?!(temporal-polyfill|temporal-utils|'), ...otherUntransformed];
 const node = {
   testEnvironment: 'node',
   transform: { '\\.[jt]sx?$': ['babel-jest', { configFile: false, presets: ['@babel/preset-typescript'], plugins: ['@babel/plugin-transform-modules-commonjs'] }] },
@@ -15,6 +17,7 @@ module.exports = {
     {
       displayName: 'web',
       preset: 'jest-expo/web',
+      transformIgnorePatterns: webUntransformed,
       testMatch: ['<rootDir>/tests/components/**/*.test.tsx'],
       moduleNameMapper: { ...alias, '\\.css$': '<rootDir>/tests/support/empty-module.js' },
       modulePathIgnorePatterns: ['<rootDir>/dist', '<rootDir>/.state'],

@@ -83,13 +83,13 @@ function optionsOf(input: CanvasPlotInput, width: number): UPlot.Options {
   const axis = { stroke: colors.dim, grid: { stroke: colors.line, width: 1 }, ticks: { stroke: colors.line, width: 1, size: 4 } };
   const scaleOf = unit === 'rad' ? { factor: 1e3, sign: 'mrad' } : { factor: 1, sign: unitSign(unit) };
   return {
-    width, height: heightPx, ms: 1, legend: { show: false }, padding: [8, 8, 0, 0],
+    width, height: heightPx, ms: 1, legend: { show: false }, padding: [8, 22, 0, 0],
     cursor: { drag: { x: false, y: false, setScale: false }, y: false, points: { size: 8, fill: colors.lamp, stroke: colors.lamp } },
     scales: { x: { time: false, auto: false, min: input.span.from, max: input.span.to }, y: { auto: true, range: (_, least, greatest) => roomyRange(least, greatest) } },
     series: [{}, { stroke: colors.text, width: 1.5, points: { show: false }, spanGaps: false }],
     axes: [
       { ...axis, font: font('Atkinson Hyperlegible Mono'), space: 84, values: (_, ticks) => ticks.map((at) => formatClock(at, { timeZone, precision: (ticks[1] ?? at) - (ticks[0] ?? at) < 60_000 ? 'seconds' : 'short' })), incrs: timeIncrements },
-      { ...axis, font: font('Atkinson Hyperlegible Mono'), size: 62, label: scaleOf.sign, labelFont: font('Atkinson Hyperlegible Next'), labelSize: 18, values: (_, ticks) => ticks.map((y) => String(Number((y * scaleOf.factor).toPrecision(6)))) },
+      { ...axis, font: font('Atkinson Hyperlegible Mono'), size: 48, label: scaleOf.sign, labelFont: font('Atkinson Hyperlegible Next'), labelSize: 20, values: (_, ticks) => ticks.map((y) => String(Number((y * scaleOf.factor).toPrecision(6)))) },
     ],
     hooks: {
       drawClear: [(plot) => drawBands(plot, input.bands, colors)],
@@ -121,8 +121,8 @@ export function useCanvasPlot(input: CanvasPlotInput): void {
     const stopGestures = gestures(made, latest);
     const observer = typeof ResizeObserver === 'undefined' ? null : new ResizeObserver(() => made.setSize({ width: Math.max(200, element.clientWidth), height: heightPx }));
     observer?.observe(element);
-    // A canvas does not redraw by itself when its font arrives.
-    void document.fonts?.ready.then(() => (plot.current === made ? made.redraw(false, true) : undefined));
+    // A canvas neither asks for a font nor redraws by itself when it arrives.
+    void document.fonts?.load(font('Atkinson Hyperlegible Mono')).then(() => (plot.current === made ? made.redraw(false, true) : undefined));
     return () => {
       plot.current = null;
       observer?.disconnect();

@@ -1,0 +1,58 @@
+import { shiftedBy, toRad, zeroOffset } from '@/components/runs/deflection-series';
+import { nightPlan, plannedItems } from '@/components/runs/live-plan';
+import { filterChoices, filterSteps, noFilter, outcomeOf } from '@/components/runs/step-filter';
+import { leverOf, spotM } from '@/shared/physics/lever';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import { nowUtcMs, rowsAt, timeline, timeZone, viewAt } from '../fixtures/run';
+
+const view = viewAt(nowUtcMs);
+const items = plannedItems(view, timeZone);
+
+test('the rest of the night follows the step that is going on, without a break and in full', () => {
+  const rows = rowsAt(nowUtcMs);
+  const { steps } = nightPlan(view, rows, items);
+  expect(steps).toHaveLength(timeline.items.length);
+  const future = steps.filter((step) => step.phase === 'planned');
+  expect(future[0]?.startUtcMs).toBeCloseTo(steps[rows.length - 1]?.endUtcMs ?? 0, 3);
+  expect(future.at(-1)?.station).toBe('clear');
+});
+
+test('a delay moves the rest of the night with it', () => {
+  const rows = rowsAt(nowUtcMs).map((row, index, all) => (index === all.length - 1 ? { ...row, plannedEndUtcMs: (row.plannedEndUtcMs ?? 0) + 240_000 } : row));
+  const { steps } = nightPlan(view, rows, items);
+  expect((steps.at(-1)?.endUtcMs ?? 0) - timeline.endUtcMs).toBeCloseTo(240_000, 3);
+});
+
+test('a dwell cut short by a hold is to be done again; a run that is over has no future', () => {
+  const rows = rowsAt(nowUtcMs).map((row, index, all) => (index === all.length - 1 ? { ...row, endUtcMs: nowUtcMs, outcome: 'cut short' as const } : row));
+  const held = nightPlan({ ...view, state: 'held' }, rows, items).steps;
+  expect(held[rows.length]?.kind).toBe('dwell');
+  expect(nightPlan({ ...view, state: 'stopped' }, rows, items).steps).toHaveLength(rows.length);
+});
+
+test('a run that has not started has no plan yet', () => {
+  expect(plannedItems({ ...view, startedAt: null }, timeZone)).toBeNull();
+});
+
+test('a spot on the scale is turned back into the pendulum angle, also with an unknown zero', () => {
+  const lever = leverOf(demoRigWide);
+  if (lever === null) throw new Error('the demo rig has a lever');
+  const spots = [-1e-3, 1e-3].map((rad) => spotM(rad, lever) * 1000 + 40);
+  expect(Array.from(toRad(spots, 'mm', demoRigWide) ?? [])).toEqual([expect.closeTo(-1e-3, 9), expect.closeTo(1e-3, 9)]);
+  expect(Array.from(toRad([250], 'urad', demoRigWide) ?? [])).toEqual([expect.closeTo(250e-6, 12)]);
+  expect(toRad([1], 'degC', demoRigWide)).toBeNull();
+});
+
+test("the prediction is laid on the channel's own zero", () => {
+  const x = Array.from({ length: 100 }, (_, index) => index);
+  const predicted = { x, y: x.map((at) => Math.sin(at / 9)) };
+  expect(zeroOffset(shiftedBy(predicted, 0.37), predicted)).toBeCloseTo(0.37, 12);
+});
+
+test('the log is filtered by kind, station and outcome, and offers what occurs', () => {
+  const rows = rowsAt(nowUtcMs).map((row, index) => (index === 6 ? { ...row, good: false } : row));
+  expect(filterChoices(rows)).toEqual({ kind: ['dwell', 'home', 'settle', 'swing'], station: ['far', 'inline', 'near'], outcome: ['done', 'running', 'not good'] });
+  expect(filterSteps(rows, { ...noFilter, kind: 'dwell', station: 'far' }).every((row) => row.kind === 'dwell' && row.station === 'far')).toBe(true);
+  expect(filterSteps(rows, { ...noFilter, outcome: 'not good' }).map(outcomeOf)).toEqual(['done, not good']);
+  expect(filterSteps(rows, { ...noFilter, outcome: 'running' })).toHaveLength(1);
+});
