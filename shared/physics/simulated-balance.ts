@@ -36,8 +36,8 @@ export interface SimulatedBalance {
   advance(to: AdvanceTo): DeflectionBatch;
 }
 
-/** Steps per period: the fourth-order error of a swing is then below 1e-7 of its amplitude a period. */
-const STEPS_PER_PERIOD = 100;
+/** Steps per period: a phase error of (2π/200)⁵/120 a step, 5e-8 a period, from the fourth-order rule. */
+const STEPS_PER_PERIOD = 200;
 /** While the sources turn the torque has corners: short steps keep them harmless, s. */
 const STEP_IN_MOTION_S = 0.1;
 const MS_PER_S = 1000;
@@ -102,17 +102,16 @@ class Pendulum {
   advanceTo(atS: number, phiAt: (atS: number) => number): void {
     const beganS = this.atS;
     const steps = Math.ceil((atS - beganS) / (this.setting.oscillator.periodS / STEPS_PER_PERIOD) - TINY);
-    for (let index = 0; index < steps; index += 1) {
-      const part = (place: number) => beganS + ((atS - beganS) * place) / steps;
-      this.integrate({ fromS: part(index), toS: part(index + 1) }, phiAt);
-    }
+    const h = (atS - beganS) / steps;
+    for (let index = 0; index < steps; index += 1) this.integrate(beganS + h * index, h, phiAt);
     this.atS = atS;
   }
 
   /** In shorter steps while the sources turn. */
-  private integrate({ fromS, toS }: { fromS: number; toS: number }, phiAt: (atS: number) => number): void {
-    const h = toS - fromS;
-    const [from, middle, to] = [phiAt(fromS), phiAt(fromS + h / 2), phiAt(toS)];
+  private integrate(fromS: number, h: number, phiAt: (atS: number) => number): void {
+    const from = phiAt(fromS);
+    const middle = phiAt(fromS + h / 2);
+    const to = phiAt(fromS + h);
     const turning = from !== middle || middle !== to;
     const parts = turning ? Math.ceil(h / STEP_IN_MOTION_S - TINY) : 1;
     if (parts <= 1) return this.step(h, { from, middle, to });
