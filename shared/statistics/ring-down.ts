@@ -1,4 +1,4 @@
-import type { Basis, SeparableSegment } from './variable-projection';
+import type { Basis, BasisDerivative, SeparableSegment } from './variable-projection';
 
 /**
  * The dwell model: y = c₀ + c₁ (t − t₀) + e^(−γt) (A cos ωᵢt + B sin ωᵢt), with ω and γ shared by all segments and
@@ -44,32 +44,26 @@ function ringDownBasis(tS: Float64Array, centreS: number, at: { omega: number; s
   const time = new Float64Array(n);
   const c = new Float64Array(n);
   const s = new Float64Array(n);
-  const tc = new Float64Array(n);
-  const ts = new Float64Array(n);
-  const minusTc = new Float64Array(n);
-  const minusTs = new Float64Array(n);
   for (let i = 0; i < n; i += 1) {
     const t = tS[i] as number;
     const decay = Math.exp(-at.gamma * t);
-    const cos = decay * Math.cos(at.omega * t);
-    const sin = decay * Math.sin(at.omega * t);
     time[i] = t - centreS;
-    c[i] = cos;
-    s[i] = sin;
-    tc[i] = t * cos * at.slope;
-    ts[i] = -t * sin * at.slope;
-    minusTc[i] = -t * cos;
-    minusTs[i] = -t * sin;
+    c[i] = decay * Math.cos(at.omega * t);
+    s[i] = decay * Math.sin(at.omega * t);
   }
-  return {
-    columns: [one, time, c, s],
-    derivatives: [
-      { column: cosine, parameter: 0, values: ts },
-      { column: sine, parameter: 0, values: tc },
-      { column: cosine, parameter: 1, values: minusTc },
-      { column: sine, parameter: 1, values: minusTs },
-    ],
-  };
+  return { columns: [one, time, c, s], derivatives: () => ringDownDerivatives(tS, at) };
+}
+
+/** d cos/dω = −t sin, d sin/dω = t cos, d/dγ = −t, each with the decay. */
+function ringDownDerivatives(tS: Float64Array, at: { omega: number; slope: number; gamma: number }): BasisDerivative[] {
+  const tc = tS.map((t) => t * Math.exp(-at.gamma * t) * Math.cos(at.omega * t));
+  const ts = tS.map((t) => t * Math.exp(-at.gamma * t) * Math.sin(at.omega * t));
+  return [
+    { column: cosine, parameter: 0, values: ts.map((value) => -at.slope * value) },
+    { column: sine, parameter: 0, values: tc.map((value) => at.slope * value) },
+    { column: cosine, parameter: 1, values: tc.map((value) => -value) },
+    { column: sine, parameter: 1, values: ts.map((value) => -value) },
+  ];
 }
 
 export function mean(values: ArrayLike<number>): number {

@@ -11,8 +11,14 @@ import { at, invertSymmetric, SingularMatrixError, solveSymmetric, type Matrix }
 export interface Basis {
   /** Columns of Φ; owned by the fit, which overwrites them. */
   columns: Float64Array[];
-  /** The columns of ∂Φ/∂α that are not zero. */
-  derivatives: { column: number; parameter: number; values: Float64Array }[];
+  /** The columns of ∂Φ/∂α that are not zero; computed only where they are needed. */
+  derivatives(): BasisDerivative[];
+}
+
+export interface BasisDerivative {
+  column: number;
+  parameter: number;
+  values: Float64Array;
 }
 
 export interface SeparableSegment {
@@ -201,7 +207,9 @@ function project(segment: SeparableSegment, columns: Float64Array[]): { qr: QrFa
 }
 
 function fitSegment(segment: SeparableSegment, alpha: readonly number[]): SegmentFit {
-  const { columns, derivatives } = segment.basis(alpha);
+  const basis = segment.basis(alpha);
+  const { columns } = basis;
+  const derivatives = basis.derivatives();
   const size = columns.length;
   const projected = project(segment, columns);
   if (projected === null) throw new SingularMatrixError('the columns of the fit depend on each other');
