@@ -39,6 +39,8 @@ export function ringDownSegment(data: RingDownData): SeparableSegment {
 }
 
 function ringDownBasis(tS: Float64Array, centreS: number, at: { omega: number; slope: number; gamma: number }): Basis {
+  const { omega, gamma } = at;
+  const { exp, cos, sin } = Math;
   const n = tS.length;
   const one = new Float64Array(n).fill(1);
   const time = new Float64Array(n);
@@ -46,10 +48,10 @@ function ringDownBasis(tS: Float64Array, centreS: number, at: { omega: number; s
   const s = new Float64Array(n);
   for (let i = 0; i < n; i += 1) {
     const t = tS[i] as number;
-    const decay = Math.exp(-at.gamma * t);
+    const decay = exp(-gamma * t);
     time[i] = t - centreS;
-    c[i] = decay * Math.cos(at.omega * t);
-    s[i] = decay * Math.sin(at.omega * t);
+    c[i] = decay * cos(omega * t);
+    s[i] = decay * sin(omega * t);
   }
   return { columns: [one, time, c, s], derivatives: () => ringDownDerivatives(tS, at) };
 }
