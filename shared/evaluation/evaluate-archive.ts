@@ -1,7 +1,9 @@
 import type { Archive } from '../archive/read-archive';
 import type { ArchiveWarning } from '../archive/archive-types';
+import { channelPath } from '../archive/channel-csv';
 import { UnusableArchive } from '../archive/unusable-archive';
 import { CODATA_2022_G, RAD_PER_DEG } from '../physics/constants';
+import { SingularMatrixError } from '../statistics/symmetric';
 import { leverOf } from '../physics/lever';
 import { inertiaKgM2 } from '../physics/oscillator';
 import { geometryOf, torquePerG } from '../physics/torque';
@@ -52,7 +54,7 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     dwells: dwellResults(analysis),
     reversal_rad: reversal === null ? null : { value: reversal.value, u: reversal.known?.u ?? null, count: reversal.count },
     G: solution === null ? null : { value: solution.bigG, u, degreesOfFreedom: finiteOrNull(budget?.degreesOfFreedom) },
-    relativeU: solution === null || u === null ? null : u / Math.abs(solution.bigG),
+    relativeU: solution === null || u === null || solution.bigG === 0 ? null : u / Math.abs(solution.bigG),
     codata: {
       ...CODATA_2022_G,
       En: solution === null || u === null ? null : (solution.bigG - CODATA_2022_G.value) / (2 * Math.hypot(u, CODATA_2022_G.u)),
@@ -71,6 +73,8 @@ function analysisOf(archive: Archive, plan: EvaluationPlan): Analysis {
   try {
     return analyse(archive, plan);
   } catch (error) {
+    if (error instanceof SingularMatrixError)
+      throw new UnusableArchive({ file: channelPath(plan.channel) }, `the dwells cannot be fitted: ${error.message}`);
     if (error instanceof NoSolutionError) throw new UnusableArchive({ file: 'rig.json' }, error.message);
     throw error;
   }

@@ -30,11 +30,10 @@ export interface EvaluationPlan {
 export function evaluationPlan(archive: Archive, options: EvaluationOptions): EvaluationPlan {
   const registered = archive.registered;
   const method = options.method ?? registered?.method ?? 'equilibrium';
-  if (method !== 'equilibrium') throw new NotYetError(`not-yet: the method "${method}" is not built yet; "equilibrium" is`);
-  if (options.boundRad !== undefined) throw new NotYetError('not-yet: the test of an empty control against a bound is not built yet');
+  if (method !== 'equilibrium') throw new NotYetError(`the method "${method}" is not built yet; "equilibrium" is`);
+  if (options.boundRad !== undefined) throw new NotYetError('the test of an empty control against a bound is not built yet');
   const drift = registered?.drift ?? 'aba';
-  if (drift === 'gls')
-    throw new NotYetError('not-yet: the drift model "gls" of protocol.json is not built yet; "aba" and "polynomial" are');
+  if (drift === 'gls') throw new NotYetError('the drift model "gls" of protocol.json is not built yet; "aba" and "polynomial" are');
   const channel = chooseChannel(archive, options.channel ?? registered?.channel ?? null);
   const asRegistered =
     method === (registered?.method ?? 'equilibrium') && (registered?.channel === undefined || registered.channel === channel);

@@ -1,8 +1,8 @@
-import { at, bilinear, type Matrix, solveSymmetric } from '../statistics/symmetric';
+import { at, bilinear, type Matrix, SingularMatrixError, solveSymmetric } from '../statistics/symmetric';
 import { leastSquares } from '../statistics/least-squares';
 import { offset, ringDownSegment, type RingDownData } from '../statistics/ring-down';
 import { isOscillation, type RingDownStart } from '../statistics/ring-down-start';
-import { fitSeparable, solveAtFixedAlpha, type SeparableFit } from '../statistics/variable-projection';
+import { fitSeparable, solveAtFixedAlpha, type SeparableFit, type SeparableSegment } from '../statistics/variable-projection';
 
 /** What the dwells themselves say about the free pendulum. */
 export interface RingDownResult {
@@ -45,8 +45,8 @@ const leastSignificance = 10;
 export function fitRingDown(data: readonly RingDownData[], start: RingDownStart | null, measured: HeldOscillation | null): DwellFit | null {
   const segments = data.map(ringDownSegment);
   if (start !== null) {
-    const fit = fitSeparable(segments, [start.omega, start.gamma], { allowed: isOscillation });
-    if (tells(fit, data)) {
+    const fit = tryFit(segments, start);
+    if (fit !== null && tells(fit, data)) {
       const alphaCovariance = honestCovariance(fit);
       return {
         fit,
@@ -76,6 +76,16 @@ export interface HeldOscillation {
   omega: number;
   gamma: number;
   covariance: Matrix;
+}
+
+/** Null where the data hold no trace of an oscillation at all. */
+function tryFit(segments: readonly SeparableSegment[], start: RingDownStart): SeparableFit | null {
+  try {
+    return fitSeparable(segments, [start.omega, start.gamma], { allowed: isOscillation });
+  } catch (error) {
+    if (error instanceof SingularMatrixError) return null;
+    throw error;
+  }
 }
 
 function tells(fit: SeparableFit, data: readonly RingDownData[]): boolean {

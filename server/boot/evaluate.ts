@@ -1,0 +1,88 @@
+import { parseArgs } from 'node:util';
+import { readArchive } from '@/shared/archive/read-archive';
+import { UnusableArchive } from '@/shared/archive/unusable-archive';
+import { evaluateArchive } from '@/shared/evaluation/evaluate-archive';
+import { evaluationMethods, type EvaluationMethod, type EvaluationOptions } from '@/shared/evaluation/registration';
+import type { EvaluationResult } from '@/shared/evaluation/result';
+import { NotYetError } from '@/shared/lib/not-yet-error';
+import { readArchiveFiles } from '../evaluation/archive-files';
+import { sha256Hex } from '../evaluation/sha256';
+
+/** `npm run -s evaluate -- PATH …`: G and its uncertainty from an archive, without server, database or network. */
+
+const usage =
+  'Usage: npm run -s evaluate -- PATH [--method equilibrium|period|acceleration|modulation] [--channel NAME] [--bound RAD] [--trials N]';
+
+const options = {
+  method: { type: 'string' },
+  channel: { type: 'string' },
+  bound: { type: 'string' },
+  trials: { type: 'string' },
+} as const;
+
+class UnusableArguments extends Error {}
+
+interface Request {
+  path: string;
+  options: EvaluationOptions;
+}
+
+function requested(args: readonly string[]): Request {
+  const { values, positionals } = parsedArguments(args);
+  const [path, ...more] = positionals;
+  if (path === undefined || more.length > 0) throw new UnusableArguments(`name one archive, a folder or a ZIP.\n${usage}`);
+  if (values.trials !== undefined && !/^\d+$/.test(values.trials))
+    throw new UnusableArguments(`--trials ${values.trials}: a whole number of 0 or more is needed`);
+  const boundRad = values.bound === undefined ? undefined : Number(values.bound);
+  if (boundRad !== undefined && !(boundRad > 0)) throw new UnusableArguments(`--bound ${values.bound}: a positive angle in rad is needed`);
+  return {
+    path,
+    options: {
+      ...(values.method === undefined ? {} : { method: methodOf(values.method) }),
+      ...(values.channel === undefined ? {} : { channel: values.channel }),
+      ...(boundRad === undefined ? {} : { boundRad }),
+    },
+  };
+}
+
+function parsedArguments(args: readonly string[]) {
+  try {
+    return parseArgs({ args: [...args], options, allowPositionals: true });
+  } catch (error) {
+    throw new UnusableArguments(`${error instanceof Error ? error.message : String(error)}\n${usage}`);
+  }
+}
+
+function methodOf(name: string): EvaluationMethod {
+  const method = evaluationMethods.find((one) => one === name);
+  if (method === undefined) throw new UnusableArguments(`--method ${name}: there are ${evaluationMethods.join(', ')}`);
+  return method;
+}
+
+/** Evaluates the archive at a path. @throws UnusableArchive, NotYetError */
+export function evaluatePath(path: string, chosen: EvaluationOptions = {}): EvaluationResult {
+  return evaluateArchive(readArchive(readArchiveFiles(path), sha256Hex), chosen).result;
+}
+
+export interface Output {
+  out: (text: string) => void;
+  err: (text: string) => void;
+}
+
+const toProcess: Output = { out: (text) => process.stdout.write(text), err: (text) => process.stderr.write(text) };
+
+/** The command: one JSON object on `out` and 0, or a message on `err` and 2. `args` are those after the command's name. */
+export function main(args: readonly string[], output: Output = toProcess): number {
+  try {
+    const request = requested(args);
+    output.out(`${JSON.stringify(evaluatePath(request.path, request.options), null, 2)}\n`);
+    return 0;
+  } catch (error) {
+    if (error instanceof NotYetError) output.err(`evaluate: ${error.message} [${error.code}]\n`);
+    else if (error instanceof UnusableArchive || error instanceof UnusableArguments) output.err(`evaluate: ${error.message}\n`);
+    else throw error;
+    return 2;
+  }
+}
+
+if (require.main === module) process.exitCode = main(process.argv.slice(2));
