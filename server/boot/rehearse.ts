@@ -7,7 +7,10 @@ import { canonicalJson } from '@/shared/archive/chain';
 import type { RunStart, SimulatedRun } from '@/shared/archive/run-records';
 import { NotYetError } from '@/shared/lib/not-yet-error';
 import { CODATA_2022_G } from '@/shared/physics/constants';
+import { oscillatorOf } from '@/shared/physics/oscillator';
+import { geometryOf } from '@/shared/physics/torque';
 import { checkProtocol } from '@/shared/protocol/check';
+import type { RigDocument } from '@/shared/rig/document';
 import { faultKinds, faultKindsNotYet, isFaultKind } from '../engine/rehearsal/rehearsal-faults';
 import { type Rehearsal, rehearse } from '../engine/rehearsal/rehearse';
 import { writeArchiveFolder } from '../evaluation/archive-files';
@@ -98,6 +101,12 @@ function emptyFolder(folder: string | undefined): string {
   return folder;
 }
 
+/** The simulated pendulum needs its torque and its free oscillation. */
+function assertSimulable(rig: RigDocument): void {
+  geometryOf(rig);
+  if (oscillatorOf(rig) === null) throw new Unusable('The rig cannot be simulated: measured.period_s and measured.decayTime_s are needed in its document.');
+}
+
 /** The rehearsal's id: the same for the same input. */
 function runIdOf({ document, rig, startUtcMs, simulated }: Request): string {
   const hash = sha256Hex(canonicalJson({ document, rig, startUtcMs, simulated }));
@@ -151,6 +160,7 @@ async function run(args: readonly string[]): Promise<Record<string, unknown>> {
   const { document, rig, startUtcMs, folder } = request;
   const refusals = checkProtocol(document, rig, { angleDeg: rig.motion?.homeDeg ?? 0 });
   if (refusals.length > 0) throw new Unusable(`The protocol "${document.name}" is refused:\n${listed(refusals)}`);
+  assertSimulable(rig);
   const start = runStart(request);
   const result = await rehearse({ start, startUtcMs }, rehearsalParts());
   writeArchive(folder, start, result);

@@ -8,7 +8,8 @@ import {
 } from './halting';
 import { hasRestarted, noteArmKey, noteEdge, noteInterlock, noteLease, noteLost, noteReady, noteRefusal, noteReset, noteStandstill, noteStrangeMotion, noteSupply } from './observations';
 import { type Advance, CHART_VERSION, type ChartState, type RunContext, type RunEvent, type RunSnapshot } from './run-context';
-import { askAgain, chooseNext, dropAhead, endStanding, expectEnd, finishMotion, noteBegan, noteEnded, sendAhead, standingEndUtcMs, takeAhead } from './steps';
+import { askAgain, dropAhead, expectEnd, finishMotion, noteBegan, noteEnded, takeAhead } from './motions';
+import { chooseNext, endStanding, sendAhead, standingEndUtcMs } from './steps';
 
 /**
  * The run as a state chart: a pure function from a snapshot and an event to the next snapshot, the rows and events to be

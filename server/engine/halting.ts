@@ -2,8 +2,9 @@ import type { Instant } from '../interfaces/clock';
 import { startRun } from './beginning';
 import type { Draft } from './draft';
 import type { InterruptionCause, KnownController, RunEvent } from './run-context';
+import { finishMotion, reachedTarget, takeAhead } from './motions';
 import { predictEndUtcMs } from './predicted-end';
-import { beginHome, beginStanding, beginSwing, chooseNext, finishMotion, reachedTarget, standingEndUtcMs, takeAhead, toleranceDeg } from './steps';
+import { beginHome, beginStanding, beginSwing, chooseNext, standingEndUtcMs, toleranceDeg } from './steps';
 import { CONFIRM_MS, GAP_LIMIT_MS, LEAD_MS } from './timing';
 
 /** How a run comes to rest and how it goes on: holds, stops, interruptions, resuming. */

@@ -1,4 +1,4 @@
-import fc from 'fast-check';
+import * as fc from 'fast-check';
 import { verifyChain } from '@/shared/archive/chain';
 import type { InterruptionPolicy } from '@/shared/protocol/document';
 import { type Bench, makeBench, runStart, sha256, shortProtocol } from './rig-bench';

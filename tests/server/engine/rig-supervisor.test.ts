@@ -64,17 +64,19 @@ test('one run to a rig: a second start is refused until the first is over, anoth
   expect(supervisor.startRun(lab.make({ runId: 'run-4' })).facts().runId).toBe('run-4');
 });
 
-test.each([
-  ['not armed', { arm: null }, 'not-armed', 'A named person on site has to arm it first'],
-  ['armed too short', { arm: { name: 'Ada Quill', untilUtcMs: startUtcMs + 60_000 } }, 'not-armed', 'before the predicted finish'],
-  ['with an arm that is over', { arm: { name: 'Ada Quill', untilUtcMs: startUtcMs - 1 } }, 'not-armed', 'not armed'],
-  ['with a protocol that names an unknown station', { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'swing', to: 'nowhere' }] } }, 'protocol-refused', 'nowhere'],
-  ['with a step that is not built', { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'kick', amplitude_urad: 2000 }] } }, 'not-yet', 'kick'],
-  ['on a rig without a link', { rigId: 'west-bench' }, 'not-ready', 'no link'],
-] as const)('a start %s is refused and nothing moves', async (_, more, code, words) => {
+const refusedStarts: { when: string; more: Partial<RunStart>; code: string; words: string }[] = [
+  { when: 'not armed', more: { arm: null }, code: 'not-armed', words: 'A named person on site has to arm it first' },
+  { when: 'armed too short', more: { arm: { name: 'Ada Quill', untilUtcMs: startUtcMs + 60_000 } }, code: 'not-armed', words: 'before the predicted finish' },
+  { when: 'with an arm that is over', more: { arm: { name: 'Ada Quill', untilUtcMs: startUtcMs - 1 } }, code: 'not-armed', words: 'not armed' },
+  { when: 'to an unknown station', more: { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'swing', to: 'nowhere' }] } }, code: 'protocol-refused', words: 'nowhere' },
+  { when: 'with a step that is not built', more: { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'kick', amplitude_urad: 2000 }] } }, code: 'not-yet', words: 'kick' },
+  { when: 'on a rig without a link', more: { rigId: 'west-bench' }, code: 'not-ready', words: 'no link' },
+];
+
+test.each(refusedStarts)('a start $when is refused and nothing moves', async ({ more, code, words }) => {
   const lab = makeLab();
   const supervisor = lab.newSupervisor();
-  const refused = refusal(() => supervisor.startRun(lab.make(more as Partial<RunStart>)));
+  const refused = refusal(() => supervisor.startRun(lab.make(more)));
   expect(refused.code).toBe(code);
   expect(refused.message).toContain(words);
   await lab.clock.advance(60_000);

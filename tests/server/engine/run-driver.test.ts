@@ -517,10 +517,10 @@ describe('other steps', () => {
 
   // 22:00 UTC on 1 March is 23:00 in Oslo (UTC+1 in winter).
   test.each([
-    ['still to come: waited for', { localTime: '23:05' }, 'finished', 300],
-    ['past: gone on', { localTime: '22:00' }, 'finished', 0],
-    ['past and to be held', { localTime: '22:00', ifPast: 'hold' as const }, 'held', 0],
-  ])('wait until a local time that is %s', async (_, until, state, waitedS) => {
+    { when: 'still to come: waited for', until: { localTime: '23:05' }, state: 'finished', waitedS: 300 },
+    { when: 'past: gone on', until: { localTime: '22:00' }, state: 'finished', waitedS: 0 },
+    { when: 'past and to be held', until: { localTime: '22:00', ifPast: 'hold' as const }, state: 'held', waitedS: 0 },
+  ])('wait until a local time that is $when', async ({ until, state, waitedS }) => {
     const bench = await underWay(700, runStart(steps({ kind: 'wait', until }, { kind: 'swing', to: 'far' })));
     expect(bench.driver.facts().state).toBe(state);
     const wait = bench.store.log()[2];
