@@ -100,6 +100,7 @@ async function storeStart(caller: Caller, start: RunStart, with_: { begin: Begin
 
 function drive(services: Services, run: RunRecord): void {
   services.activeRuns.add(run);
+  services.stations.loadMasses(run.rigId, run.start.rig);
   try {
     services.supervisor.startRun(run.start);
   } catch (error) {

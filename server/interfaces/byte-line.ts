@@ -3,9 +3,10 @@
  * knows nothing of what is behind it.
  */
 export interface ByteLine {
-  /** Writes bytes at once; resolves or rejects by its own deadline, never hangs. */
+  /** Writes bytes at once. A line that does not take them by its own deadline closes; it never hangs. */
   write(bytes: string): void;
-  close(): void;
+  /** Resolves when the line is free for others. */
+  close(): Promise<void> | void;
 }
 
 export interface ByteLineHandlers {

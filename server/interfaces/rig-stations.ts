@@ -33,6 +33,8 @@ export interface RigStations {
   get(rigId: string): RigStation | null;
   /** Opens a rig's line, or opens it anew after its settings or its document changed; no run may be on it. */
   put(rig: StationRig): Promise<void>;
+  /** Another mass set lies on the turntable from now on: only the simulated rig has to be told. */
+  loadMasses(rigId: string, document: RigDocument): void;
   /** @throws NotYetError for a line that this version may not open */
   assertAllowed(settings: LinkSettings): Promise<void>;
   /** Opens a line apart from the rig's own, says hello and tells what answered; nothing moves. Never rejects. */

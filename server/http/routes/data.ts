@@ -62,7 +62,7 @@ function tooLarge(file: store.ImportRecord, services: Services): ProblemError {
 /** The channel the samples go to; one that is there already must be of the same kind. */
 async function channelFor(services: Services, run: RunRecord, wanted: { name: string; unit: string }): Promise<store.ChannelRecord> {
   const channel = await store.findOrMakeChannel(services.database.db, {
-    labId: run.labId, rigId: run.rigId, runId: run.rehearsal ? run.id : null, name: wanted.name, unit: wanted.unit, quantity: wanted.unit.endsWith('rad') ? 'angle' : 'length', role: 'deflection', source: 'import',
+    labId: run.labId, rigId: run.rigId, runId: run.rehearsal ? run.id : null, name: wanted.name, unit: wanted.unit, quantity: wanted.unit.endsWith('rad') ? 'pendulum angle' : 'spot position', role: 'deflection', source: 'import',
     createdAt: services.clock.utcMs(),
   });
   if (channel.source !== 'import') throw new ProblemError('already-exists', `The channel ${channel.name} is filled by the rig itself. Choose another name for the imported one.`, [{ path: 'channelName', message: `a name other than ${channel.name}` }]);

@@ -1,0 +1,135 @@
+import { createServer, type Server } from 'node:http';
+import type { AddressInfo } from 'node:net';
+import type { Express } from 'express';
+import { createApp } from '../http/create-app';
+import { allRoutes } from '../http/routes';
+import type { Services } from '../http/services';
+import type { Cancel } from '../interfaces/clock';
+import { startTicks } from '../scheduler/ticks';
+import { keepHouse } from '../store/housekeeping';
+import { allRigs } from '../store/rigs';
+import { unfinishedRuns } from '../store/runs-read';
+import { buildServices, type BuildParts, type Inside } from './build-services';
+
+export type { BuildOverrides, BuildParts } from './build-services';
+
+export interface BuiltServer {
+  app: Express;
+  services: Services & {
+    /** Resolves when all run drivers, sample sinks, jobs and background writes have nothing in hand. */
+    idle(): Promise<void>;
+  };
+  /** Opens the rigs' lines, takes up unfinished runs, begins to work off jobs. */
+  start(): Promise<void>;
+  /** Lets go of everything; runs go on as their protocols say when the next server takes them up. The database stays open. */
+  stop(): Promise<void>;
+  /** Serves on the host and port of the configuration. Returns the address. */
+  listen(): Promise<string>;
+}
+
+/** The whole server out of its parts; nothing runs before `start`. */
+export function buildServer(parts: BuildParts): BuiltServer {
+  const { services, inside } = buildServices(parts);
+  const app = createApp(services, allRoutes);
+  const server = createServer(app);
+  const life = new Life(services, inside, parts);
+  return {
+    app,
+    services: Object.assign(services, { idle: () => idle(services, inside) }),
+    start: () => life.start(),
+    stop: async () => {
+      await life.stop();
+      await closeServer(server);
+    },
+    listen: () => listen(server, services),
+  };
+}
+
+/** What begins and ends with the server. */
+class Life {
+  private cancelRefresh: Cancel = () => undefined;
+  private ticks: { stop(): Promise<void> } | null = null;
+  private stopped = false;
+
+  constructor(
+    private readonly services: Services,
+    private readonly inside: Inside,
+    private readonly parts: BuildParts,
+  ) {}
+
+  async start(): Promise<void> {
+    const { services, inside } = this;
+    const { db } = services.database;
+    await keepHouse(db, services.clock.utcMs());
+    for (const rig of await allRigs(db)) {
+      if (!(await inside.leases.take({ labId: rig.labId, rigId: rig.id }))) return;
+      await inside.arms.load({ labId: rig.labId, rigId: rig.id });
+      await inside.stations.put(rig);
+    }
+    inside.leases.renewRegularly();
+    for (const run of await unfinishedRuns(db)) {
+      services.activeRuns.add(run);
+      services.stations.loadMasses(run.rigId, run.start.rig);
+    }
+    await services.access.refresh(services.activeRuns.labIds());
+    const { quarantined } = await services.supervisor.recover();
+    for (const { start, why } of quarantined) {
+      services.activeRuns.remove(start.runId);
+      services.log.error({ runId: start.runId, rigId: start.rigId }, why);
+    }
+    this.refreshRegularly();
+    inside.crew.start();
+    if (this.parts.overrides?.ticks ?? services.config.mode !== 'test') this.ticks = startTicks([{ name: 'keep house', cron: '7 * * * *', work: () => keepHouse(db, services.clock.utcMs()) }], services.log);
+  }
+
+  async stop(): Promise<void> {
+    const { services, inside } = this;
+    this.stopped = true;
+    this.cancelRefresh();
+    services.live.close();
+    services.supervisor.close();
+    await inside.closeTasks();
+    await Promise.all([inside.crew.stop(), this.ticks?.stop()]);
+    await inside.stations.close();
+    inside.arms.close();
+    await inside.background.idle();
+    await inside.leases.close();
+  }
+
+  /** Whoever signed in since must be able to hold and stop when the database goes away. */
+  private refreshRegularly(): void {
+    const { services } = this;
+    this.cancelRefresh = services.clock.after(refreshMs, () => {
+      services.background(services.access.refresh(services.activeRuns.labIds()), 'copying sessions into memory');
+      if (!this.stopped) this.refreshRegularly();
+    });
+  }
+}
+
+const refreshMs = 60_000;
+
+async function idle(services: Services, inside: Inside): Promise<void> {
+  await services.breathe();
+  await services.supervisor.idle();
+  await Promise.all([inside.stations.idle(), inside.crew.idle(), inside.background.idle()]);
+  await services.supervisor.idle();
+}
+
+function listen(server: Server, services: Services): Promise<string> {
+  const { host, port } = services.config;
+  return new Promise((resolve, reject) => {
+    server.once('error', reject);
+    server.listen(port, host, () => {
+      server.off('error', reject);
+      services.config.port = (server.address() as AddressInfo).port;
+      resolve(`http://${host.includes(':') ? `[${host}]` : host}:${String(services.config.port)}`);
+    });
+  });
+}
+
+function closeServer(server: Server): Promise<void> {
+  return new Promise((resolve) => {
+    server.close(() => resolve());
+    server.closeAllConnections();
+  });
+}

@@ -1,0 +1,21 @@
+import { buildArchive } from '@/shared/archive/build-archive';
+import { readArchive } from '@/shared/archive/read-archive';
+import { evaluateArchive } from '@/shared/evaluation/evaluate-archive';
+import { rehearse } from '../engine/rehearsal/rehearse';
+import { zipArchive } from '../evaluation/archive-files';
+import { sha256Hex } from '../evaluation/sha256';
+import type { HeavyTasks } from '../interfaces/heavy-tasks';
+import { rehearsalParts } from './rehearsal-parts';
+
+/** The heavy work itself, done in the calling thread: what a worker thread runs, and what tests call. */
+export const heavyTasks: HeavyTasks = {
+  rehearse: async (input) => {
+    const { outcome, facts, steps, events, channels, startedAtUtcMs, endedAtUtcMs } = await rehearse(input, rehearsalParts());
+    return { outcome, reason: outcome === 'finished' ? '' : facts.reason, steps, events, channels, startedAtUtcMs, endedAtUtcMs };
+  },
+  zipArchive: async (input) => zipArchive(buildArchive(input, sha256Hex)),
+  evaluate: async (input, { channel }) => {
+    const archive = readArchive(buildArchive(input, sha256Hex), sha256Hex);
+    return evaluateArchive(archive, channel === null ? {} : { channel });
+  },
+};

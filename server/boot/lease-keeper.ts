@@ -1,0 +1,86 @@
+import type { Logger } from 'pino';
+import type { Cancel, Clock } from '../interfaces/clock';
+import type { Connection } from '../store/database';
+import { giveRigLease, takeRigLease } from '../store/rig-leases';
+
+export interface LeaseParts {
+  database: Connection;
+  clock: Clock;
+  log: Logger;
+  /** Name of this process. */
+  holder: string;
+  /** Another process has taken a rig over: this one must let go of it at once. */
+  onLost(rig: RigKey): void;
+}
+
+interface RigKey {
+  labId: string;
+  rigId: string;
+}
+
+/** A crashed server's rigs are free again after this. */
+const leaseMs = 15_000;
+const renewMs = 5_000;
+const retryMs = 1_000;
+
+/** Leases of the rigs that this process drives: no rig has two drivers. */
+export class LeaseKeeper {
+  private readonly epochs = new Map<string, RigKey & { epoch: number }>();
+  private cancel: Cancel = () => undefined;
+  private closed = false;
+
+  constructor(private readonly parts: LeaseParts) {}
+
+  epochOf(rig: RigKey): number | null {
+    return this.epochs.get(rig.rigId)?.epoch ?? null;
+  }
+
+  /** Takes the lease of a rig, waiting until the one of a process that is gone has run out. False when closed before. */
+  async take(rig: RigKey): Promise<boolean> {
+    for (let told = false; !this.closed; told = true) {
+      if (await this.tryTake(rig)) return true;
+      if (!told) this.parts.log.warn(rig, 'another server holds the lease of the rig; waiting for its end');
+      await new Promise<void>((resolve) => void this.parts.clock.after(retryMs, resolve));
+    }
+    return false;
+  }
+
+  renewRegularly(): void {
+    this.cancel = this.parts.clock.after(renewMs, () => {
+      void this.renewAll().then(() => {
+        if (!this.closed) this.renewRegularly();
+      });
+    });
+  }
+
+  /** Gives all leases back, so that the next process need not wait. */
+  async close(): Promise<void> {
+    this.closed = true;
+    this.cancel();
+    const { database, clock, holder } = this.parts;
+    for (const { labId, rigId } of this.epochs.values()) await giveRigLease(database.db, { labId, rigId, holder, nowUtcMs: clock.utcMs() }).catch(() => undefined);
+    this.epochs.clear();
+  }
+
+  private async tryTake(rig: RigKey): Promise<boolean> {
+    const { database, clock, holder } = this.parts;
+    const nowUtcMs = clock.utcMs();
+    const epoch = await takeRigLease(database.db, { ...rig, holder, nowUtcMs, untilUtcMs: nowUtcMs + leaseMs });
+    if (epoch === null) return false;
+    this.epochs.set(rig.rigId, { ...rig, epoch });
+    return true;
+  }
+
+  /** A database that does not answer takes no lease away: nobody else can get it there either. */
+  private async renewAll(): Promise<void> {
+    for (const { labId, rigId } of [...this.epochs.values()]) {
+      try {
+        if ((await this.tryTake({ labId, rigId })) || this.closed) continue;
+        this.epochs.delete(rigId);
+        this.parts.onLost({ labId, rigId });
+      } catch (error) {
+        this.parts.log.warn({ err: error, rigId }, 'the lease of a rig could not be renewed');
+      }
+    }
+  }
+}

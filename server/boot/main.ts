@@ -1,0 +1,74 @@
+import { connect } from '@/db/connect';
+import { demoPassword, demoPeople, seedDemo } from '@/db/demo/seed';
+import { migrateToLatest } from '@/db/migrate';
+import { join } from 'node:path';
+import { hashPassword } from '../auth/passwords';
+import { sha256Hex } from '../evaluation/sha256';
+import type { ServerConfig } from '../interfaces/server-config';
+import { startDemoMailbox, type DemoMailbox } from '../notify/demo-mailbox';
+import { createSmtpMail } from '../notify/smtp-mail';
+import { buildServer } from './build-server';
+import { ConfigError, readConfig } from './config';
+import { RealClock } from './real-clock';
+
+/** The server as a process: configuration, database, demo lab, one line on stdout once it listens, and a clean end. */
+
+const longestEndMs = 1_900;
+
+function configuration(): ServerConfig {
+  try {
+    return readConfig(process.env);
+  } catch (error) {
+    if (!(error instanceof ConfigError)) throw error;
+    process.stderr.write(`${error.message}\n`);
+    return process.exit(2);
+  }
+}
+
+async function main(): Promise<void> {
+  const config = configuration();
+  const clock = new RealClock();
+  const database = connect({ url: config.databaseUrl, maxConnections: 20 });
+  await migrateToLatest(database);
+  if (config.demo) await seedDemo(database, { nowUtcMs: clock.utcMs(), hashPassword, sha256: sha256Hex });
+  const mailbox = config.demo && config.smtpUrl === null ? await startDemoMailbox({ folder: join(config.stateDir, 'mail'), clock }) : null;
+  const smtpUrl = config.smtpUrl ?? mailbox?.url ?? null;
+  const mail = smtpUrl === null ? null : createSmtpMail({ url: smtpUrl, from: config.mailFrom });
+  const server = buildServer({ database, clock, config, overrides: mail === null ? {} : { mail } });
+
+  let ending = false;
+  const end = () => {
+    if (ending) return;
+    ending = true;
+    setTimeout(() => process.exit(0), longestEndMs).unref();
+    void endAll([() => server.stop(), () => mailbox?.close(), () => mail?.close(), () => database.close()]).then(() => process.exit(0));
+  };
+  process.on('SIGINT', end);
+  process.on('SIGTERM', end);
+
+  const address = await server.listen();
+  process.stdout.write(`${JSON.stringify(greeting(config, address, mailbox))}\n`);
+  await server.start();
+}
+
+/** One after another; what fails to end does not keep the rest from ending. */
+async function endAll(ends: readonly (() => unknown)[]): Promise<void> {
+  for (const endOne of ends) {
+    try {
+      await endOne();
+    } catch (error) {
+      process.stderr.write(`${String(error)}\n`);
+    }
+  }
+}
+
+/** What the start script reads and shows. */
+function greeting(config: ServerConfig, address: string, mailbox: DemoMailbox | null): object {
+  const signIns = config.demo ? demoPeople.map(({ email, role }) => ({ email, role, password: demoPassword })) : [];
+  return { listening: address, signIns, ...(mailbox === null ? {} : { mailbox: mailbox.folder }) };
+}
+
+main().catch((error: unknown) => {
+  process.stderr.write(`The server cannot start: ${error instanceof Error ? (error.stack ?? error.message) : String(error)}\n`);
+  process.exit(1);
+});

@@ -1,0 +1,153 @@
+import type { Logger } from 'pino';
+import type { LinkSettings } from '@/shared/contracts/rigs';
+import type { RigDocument } from '@/shared/rig/document';
+import { NotYetError } from '@/shared/lib/not-yet-error';
+import type { ByteLineFactory } from '../interfaces/byte-line';
+import type { Cancel, Clock } from '../interfaces/clock';
+import type { LiveSampleBatch, RigStation, RigStations, StationRig } from '../interfaces/rig-stations';
+import type { SampleStore } from '../interfaces/sample-store';
+import type { LinkEvent } from '../interfaces/turntable-link';
+import { createLink } from '../links/link-driver';
+import { assertPseudoTerminal, serialFactory } from './serial-lines';
+import { findOrMakeChannel } from '../store/imports';
+import type { Connection } from '../store/database';
+import { SampleSink } from './sample-sink';
+import type { SimulatedApparatus } from './simulated-apparatus';
+
+export interface StationsParts {
+  database: Connection;
+  samples: SampleStore;
+  clock: Clock;
+  log: Logger;
+  /** Samples of a channel are stored at most this often, ms; 0: as they come. */
+  paceMs: number;
+  /** The epoch under which this process drives a rig; null while another process holds its lease. */
+  epochOf(rig: { labId: string; rigId: string }): number | null;
+  /** The turntable and pendulum of a simulated rig; the same for as long as the rig exists. */
+  apparatusOf(rig: StationRig): SimulatedApparatus;
+  /** What the controller of a rig says, whether or not a run listens. */
+  onLinkEvent(station: RigStation, event: LinkEvent): void;
+}
+
+interface OpenStation extends RigStation {
+  /** Ends what goes on between runs. */
+  end(): void;
+}
+
+/** Lines to all rigs of this process, opened at the start and kept open. */
+export class ServerRigStations implements RigStations {
+  private readonly stations = new Map<string, OpenStation>();
+  private readonly apparatus = new Map<string, SimulatedApparatus>();
+  private readonly sinks = new Map<string, SampleSink>();
+  private readonly listeners = new Set<(batch: LiveSampleBatch) => void>();
+
+  constructor(private readonly parts: StationsParts) {}
+
+  get(rigId: string): RigStation | null {
+    return this.stations.get(rigId) ?? null;
+  }
+
+  async put(rig: StationRig): Promise<void> {
+    await this.closeOne(rig.id);
+    const { clock, log } = this.parts;
+    const { motion } = rig.document;
+    const epoch = this.parts.epochOf({ labId: rig.labId, rigId: rig.id });
+    if (motion === undefined || epoch === null) {
+      log.warn({ rigId: rig.id }, motion === undefined ? 'the rig has no motion data and is not driven' : 'another server drives the rig');
+      return;
+    }
+    const apparatus = rig.link.kind === 'simulated' ? this.parts.apparatusOf(rig) : null;
+    const factory = apparatus?.factory ?? this.factoryOf(rig.link);
+    const link = createLink({ factory, clock, rig: motion, epoch });
+    const channel = apparatus === null ? null : await this.simulatedChannel(rig);
+    const station: OpenStation = { labId: rig.labId, rigId: rig.id, settings: rig.link, link, channel, end: () => undefined };
+    const unsubscribe = link.subscribe((event) => this.parts.onLinkEvent(station, event));
+    const endFlow = apparatus === null || channel === null ? () => undefined : this.flow(apparatus, station, channel);
+    station.end = () => {
+      unsubscribe();
+      endFlow();
+    };
+    this.stations.set(rig.id, station);
+    if (apparatus === null) this.apparatus.delete(rig.id);
+    else this.apparatus.set(rig.id, apparatus);
+    link.open();
+  }
+
+  /** Another mass set lies on the turntable of a simulated rig from now on. */
+  loadMasses(rigId: string, document: RigDocument): void {
+    this.apparatus.get(rigId)?.load(document);
+  }
+
+  async assertAllowed(settings: LinkSettings): Promise<void> {
+    if (settings.kind === 'serial') await assertPseudoTerminal(settings.path);
+  }
+
+  async tryLine(rig: Pick<StationRig, 'document'> & { id?: string }, settings: LinkSettings): Promise<{ ok: boolean; detail: string; firmware: string | null }> {
+    const { motion } = rig.document;
+    if (motion === undefined) return { ok: false, detail: 'The rig document has no motion data (steps per degree, limits); enter them first.', firmware: null };
+    if (settings.kind === 'simulated') return { ok: true, detail: 'The simulated turntable is part of this server and always answers.', firmware: 'simulated' };
+    const own = this.openOn(settings);
+    if (own !== null) return ownAnswer(own);
+    return tryLink({ factory: this.factoryOf(settings), clock: this.parts.clock });
+  }
+
+  onSamples(listener: (batch: LiveSampleBatch) => void): () => void {
+    this.listeners.add(listener);
+    return () => this.listeners.delete(listener);
+  }
+
+  /** Resolves when all samples so far are stored, or were tried. */
+  async idle(): Promise<void> {
+    await Promise.all([...this.sinks.values()].map((sink) => sink.idle()));
+  }
+
+  async close(): Promise<void> {
+    await Promise.all([...this.stations.keys()].map((rigId) => this.closeOne(rigId)));
+  }
+
+  private async closeOne(rigId: string): Promise<void> {
+    const station = this.stations.get(rigId);
+    this.stations.delete(rigId);
+    station?.end();
+    await station?.link.close();
+    await this.sinks.get(rigId)?.flush();
+    this.sinks.delete(rigId);
+  }
+
+  private factoryOf(settings: LinkSettings): ByteLineFactory {
+    if (settings.kind !== 'serial') throw new NotYetError('This kind of line cannot be opened yet.');
+    return serialFactory(settings, this.parts.clock);
+  }
+
+  private openOn(settings: LinkSettings): RigStation | null {
+    if (settings.kind !== 'serial') return null;
+    return [...this.stations.values()].find((station) => station.settings.kind === 'serial' && station.settings.path === settings.path) ?? null;
+  }
+
+  private async simulatedChannel(rig: StationRig): Promise<RigStation['channel']> {
+    const wanted = { labId: rig.labId, rigId: rig.id, runId: null, name: 'deflection', quantity: 'pendulum angle', unit: 'rad', role: 'deflection' as const, source: 'simulated' as const, createdAt: this.parts.clock.utcMs() };
+    const channel = await findOrMakeChannel(this.parts.database.db, wanted);
+    return { id: channel.id, name: channel.name, unit: channel.unit };
+  }
+
+  /** Lets the pendulum's deflection into its channel and to everybody who watches. */
+  private flow(apparatus: SimulatedApparatus, station: RigStation, channel: NonNullable<RigStation['channel']>): Cancel {
+    const { samples, clock, log, paceMs } = this.parts;
+    const sink = new SampleSink({ samples, clock, log, paceMs }, { labId: station.labId, channelId: channel.id });
+    this.sinks.set(station.rigId, sink);
+    return apparatus.flow(
+      (batch) => {
+        sink.add(batch);
+        for (const listener of this.listeners) listener({ rigId: station.rigId, channelId: channel.id, channel: channel.name, unit: channel.unit, ...batch });
+      },
+      { positionKnown: () => station.link.controller()?.positionKnown ?? true, onError: (error) => log.error({ err: error, rigId: station.rigId }, 'the simulated balance failed') },
+    );
+  }
+}
+
+function ownAnswer(station: RigStation): { ok: boolean; detail: string; firmware: string | null } {
+  const { condition, detail } = station.link.health();
+  const firmware = station.link.controller()?.firmware ?? null;
+  if (condition === 'ready') return { ok: true, detail: `This line is open and the controller answers, firmware ${firmware ?? 'unknown'}.`, firmware };
+  return { ok: false, detail: `This line is open already, but the controller does not answer: ${detail}.`, firmware: null };
+}

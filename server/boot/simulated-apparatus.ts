@@ -1,0 +1,94 @@
+import { CODATA_2022_G } from '@/shared/physics/constants';
+import { createSimulatedBalance, type SimulatedBalance } from '@/shared/physics/simulated-balance';
+import type { RigDocument, RigMotion } from '@/shared/rig/document';
+import { feedSimulatedBalance } from '../ingest/simulated-balance';
+import type { ByteLineFactory } from '../interfaces/byte-line';
+import type { Cancel, Clock } from '../interfaces/clock';
+import type { SampleBatch } from '../interfaces/sample-store';
+import { createSimulatedController, type SimulatedController } from '../links/simulated-controller';
+import type { ApparatusMemory, ApparatusState } from './apparatus-memory';
+
+export interface ApparatusParts {
+  clock: Clock;
+  rigId: string;
+  document: RigDocument & { motion: RigMotion };
+  /** Of the noise and of the controller's boot; another one at each first start. */
+  seed: number;
+  /** Null: nothing is remembered over a restart. */
+  memory: ApparatusMemory | null;
+  /** A controller that lives longer than this server; absent: one of its own. */
+  controller?: SimulatedController;
+}
+
+const rateHz = 10;
+
+/** A simulated rig: the turntable's controller and the pendulum that its true angle drives, also between runs. */
+export class SimulatedApparatus {
+  readonly controller: SimulatedController;
+  private balance: SimulatedBalance;
+  private readonly born: { seed: number; uptimeS: number; atUtcMs: number };
+  private sources: string;
+
+  constructor(private readonly parts: ApparatusParts) {
+    const { clock, document, seed, memory, rigId } = parts;
+    const before = memory?.load(rigId) ?? null;
+    this.born = bornFrom(before, seed, clock.utcMs());
+    this.controller =
+      parts.controller ??
+      createSimulatedController({
+        clock, rig: document.motion, seed: this.born.seed, uptimeS: this.born.uptimeS,
+        ...(before === null ? {} : { startDeg: within(document.motion, before.angleDeg), homed: before.positionKnown }),
+      });
+    this.sources = JSON.stringify(document.sources);
+    this.balance = this.newBalance(document);
+  }
+
+  get factory(): ByteLineFactory {
+    return this.controller.factory;
+  }
+
+  /** Puts another mass set on the turntable: the pendulum comes to rest with it. */
+  load(document: RigDocument): void {
+    const sources = JSON.stringify(document.sources);
+    if (sources === this.sources) return;
+    this.sources = sources;
+    this.balance = this.newBalance(document);
+  }
+
+  /** Hands over what the readout has seen, once a second, until the returned function is called. */
+  flow(take: (batch: SampleBatch) => void, told: { positionKnown: () => boolean; onError: (error: unknown) => void }): Cancel {
+    const { clock } = this.parts;
+    const feed = feedSimulatedBalance({
+      clock,
+      balance: { advance: (to) => this.balance.advance(to) },
+      angleDegAt: this.controller.trueAngleDegAt,
+      sink: (batch) => {
+        take(batch);
+        this.remember(told.positionKnown());
+      },
+      onError: told.onError,
+    });
+    return () => feed.stop();
+  }
+
+  private remember(positionKnown: boolean): void {
+    const { memory, clock, rigId } = this.parts;
+    if (memory === null) return;
+    const atUtcMs = clock.utcMs();
+    const uptimeS = this.born.uptimeS + (atUtcMs - this.born.atUtcMs) / 1000;
+    memory.save(rigId, { seed: this.born.seed, uptimeS, atUtcMs, angleDeg: this.controller.trueAngleDegAt(atUtcMs), positionKnown });
+  }
+
+  private newBalance(document: RigDocument): SimulatedBalance {
+    const { clock, seed } = this.parts;
+    const nowUtcMs = clock.utcMs();
+    return createSimulatedBalance({ rig: document, bigG: CODATA_2022_G.value, seed, rateHz, startUtcMs: nowUtcMs, startDeg: this.controller.trueAngleDegAt(nowUtcMs) });
+  }
+}
+
+function bornFrom(before: ApparatusState | null, seed: number, nowUtcMs: number): { seed: number; uptimeS: number; atUtcMs: number } {
+  if (before === null || before.atUtcMs > nowUtcMs) return { seed, uptimeS: 1, atUtcMs: nowUtcMs };
+  return { seed: before.seed, uptimeS: before.uptimeS + (nowUtcMs - before.atUtcMs) / 1000, atUtcMs: nowUtcMs };
+}
+
+const within = (motion: RigMotion, angleDeg: number) => Math.min(motion.maxDeg, Math.max(motion.minDeg, angleDeg));

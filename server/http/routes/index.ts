@@ -1,0 +1,12 @@
+import type { MountedRoute } from '../route-context';
+import { dataRoutes } from './data';
+import { evaluationRoutes } from './evaluations';
+import { liveRoutes } from './live';
+import { peopleRoutes } from './people';
+import { protocolRoutes } from './protocols';
+import { rigRoutes } from './rigs';
+import { runRoutes } from './runs';
+import { serviceRoutes } from './service';
+
+/** Every route of the API with the function that answers it. */
+export const allRoutes: readonly MountedRoute[] = [...serviceRoutes, ...peopleRoutes, ...rigRoutes, ...protocolRoutes, ...runRoutes, ...liveRoutes, ...dataRoutes, ...evaluationRoutes];

@@ -1,0 +1,162 @@
+import { createHash, randomUUID } from 'node:crypto';
+import { tmpdir } from 'node:os';
+import request from 'supertest';
+import { demoIds, demoPeople, seedDemo } from '@/db/demo/seed';
+import { heavyTasks } from '@/server/boot/heavy-tasks';
+import { buildServer, type BuildOverrides, type BuiltServer } from '@/server/boot/build-server';
+import { VirtualClock } from '@/server/engine/virtual-clock';
+import type { RigStation, StationRig } from '@/server/interfaces/rig-stations';
+import type { ServerConfig } from '@/server/interfaces/server-config';
+import { createSimulatedController, type SimulatedController } from '@/server/links/simulated-controller';
+import { addMember, createUser } from '@/server/store/people';
+import { createLab } from '@/server/store/labs';
+import { createRig } from '@/server/store/rigs';
+import type { Role } from '@/shared/contracts/roles';
+import { roles } from '@/shared/contracts/roles';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import type { TestDatabase } from './database';
+
+export const sha256 = (text: string) => createHash('sha256').update(text).digest('hex');
+
+/** A clear evening in the lab's winter. */
+export const eveningUtcMs = Date.UTC(2031, 1, 14, 20);
+
+export interface LabServerOptions {
+  overrides?: BuildOverrides;
+  config?: Partial<ServerConfig>;
+  /** Without it a clock of its own. */
+  clock?: VirtualClock;
+}
+
+export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig> = {}): ServerConfig => ({
+  mode: 'test', databaseUrl: database.url, host: '127.0.0.1', port: 0, publicUrl: null, trustedProxies: 0, demo: true, stateDir: tmpdir(), webDir: null, smtpUrl: null,
+  mailFrom: 'Evenfall <evenfall@quillfen.example>', logLevel: 'silent',
+  limits: { requestsPerMinute: 1_000_000, interventionsPerMinute: 1_000_000, jsonBytes: 1_048_576, importBytes: 4_194_304, streamsPerUser: 6 },
+  ...changes,
+});
+
+/** Something that lives on when a server ends: the clock and the turntables. */
+export class World {
+  private server: BuiltServer | null = null;
+  private readonly controllers = new Map<string, SimulatedController>();
+  readonly clock: VirtualClock;
+
+  constructor(startUtcMs: number = eveningUtcMs) {
+    this.clock = new VirtualClock(startUtcMs, () => this.settle());
+  }
+
+  readonly controllerOf = (rig: StationRig): SimulatedController => {
+    const known = this.controllers.get(rig.id);
+    if (known !== undefined) return known;
+    const { motion } = rig.document;
+    if (motion === undefined) throw new Error('the rig of a test has motion data');
+    const controller = createSimulatedController({ clock: this.clock, rig: motion, seed: 7 });
+    this.controllers.set(rig.id, controller);
+    return controller;
+  };
+
+  controller(rigId: string): SimulatedController {
+    const controller = this.controllers.get(rigId);
+    if (controller === undefined) throw new Error(`no turntable of rig ${rigId} yet`);
+    return controller;
+  }
+
+  drivenBy(server: BuiltServer | null): void {
+    this.server = server;
+  }
+
+  private async settle(): Promise<void> {
+    await (this.server?.services.idle() ?? new Promise<void>((resolve) => void setImmediate(resolve)));
+  }
+}
+
+/** The whole server in this process: the demo lab and a foreign one on a real database, on a clock that moves when told. */
+export class LabServer {
+  private readonly cookies = new Map<string, string>();
+
+  private constructor(
+    readonly built: BuiltServer,
+    readonly world: World,
+    readonly database: TestDatabase,
+  ) {}
+
+  static async start(database: TestDatabase, options: LabServerOptions & { world?: World } = {}): Promise<LabServer> {
+    const world = options.world ?? new World();
+    await seedDemo(database.connection, { nowUtcMs: world.clock.utcMs(), hashPassword: async () => 'no password in this test', sha256 });
+    const built = buildServer({
+      database: database.connection, clock: world.clock, config: testConfig(database, options.config), overrides: { tasks: heavyTasks, controllerOf: world.controllerOf, ticks: false, paceMs: 30_000, ...options.overrides },
+    });
+    world.drivenBy(built);
+    const server = new LabServer(built, world, database);
+    await server.begin();
+    return server;
+  }
+
+  get services(): BuiltServer['services'] {
+    return this.built.services;
+  }
+
+  get clock(): VirtualClock {
+    return this.world.clock;
+  }
+
+  private async begin(): Promise<void> {
+    await this.built.start();
+    await this.clock.advance(5_000);
+    for (const { id } of demoPeople) await this.signIn(id);
+  }
+
+  async stop(): Promise<void> {
+    await this.built.stop();
+    this.world.drivenBy(null);
+  }
+
+  advance(ms: number, until?: () => boolean): Promise<void> {
+    return this.clock.advance(ms, until);
+  }
+
+  station(rigId: string = demoIds.rig): RigStation {
+    const station = this.services.stations.get(rigId);
+    if (station === null) throw new Error('the rig has no open line');
+    return station;
+  }
+
+  /** Gives an account a session; the demo's people have one from the start. */
+  async signIn(userId: string): Promise<void> {
+    const { token } = await this.services.sessions.create(userId, { userAgent: 'test', ip: '127.0.0.1' });
+    this.cookies.set(userId, `ef=${token}`);
+  }
+
+  /** The cookie of the demo's member with this role, or of an account that signed in. */
+  cookie(who: Role | { userId: string }): string {
+    const userId = typeof who === 'string' ? (demoPeople.find(({ role }) => role === who)?.id ?? '') : who.userId;
+    return this.cookies.get(userId) ?? '';
+  }
+
+  /** A request as a browser of that member would send it, with a fresh key for commands. */
+  as(who: Role | { userId: string }, method: string, path: string): request.Test {
+    const verb = method.toLowerCase() as 'get' | 'post' | 'put' | 'patch' | 'delete';
+    return request(this.built.app)[verb](`/api${path}`).set('Cookie', this.cookie(who)).set('Sec-Fetch-Site', 'same-origin').set('Idempotency-Key', randomUUID());
+  }
+
+  /** Arms the demo rig until `hours` from now. */
+  async arm(hours = 16, rigId: string = demoIds.rig): Promise<void> {
+    const until = new Date(this.clock.utcMs() + hours * 3_600_000).toISOString();
+    await this.as('operator', 'POST', `/labs/${demoIds.lab}/rigs/${rigId}/arm`).send({ name: 'Ilse Marrowby', until, cautionsRead: true }).expect(201);
+  }
+}
+
+/** A second lab with a member of each role, who are strangers to the demo lab, and a rig without a line of its own. */
+export async function foreignLab(database: TestDatabase, nowUtcMs: number): Promise<{ labId: string; rigId: string; userOf: Record<Role, string> }> {
+  const { db } = database.connection;
+  const lab = await createLab(db, { name: 'Harrowmere Physics Rooms', timeZone: 'Europe/Oslo', nowUtcMs });
+  const userOf = {} as Record<Role, string>;
+  for (const role of roles) {
+    const user = await createUser(db, { name: `Harrowmere ${role}`, email: `${role}@harrowmere.example`, passwordHash: 'none', nowUtcMs });
+    if (user === null) throw new Error('the account exists already');
+    userOf[role] = user.id;
+    await addMember(db, { labId: lab.id, userId: user.id, role, nowUtcMs });
+  }
+  const rigId = await createRig(db, { labId: lab.id, name: 'East pier', document: demoRigWide, link: { kind: 'simulated' }, massSetLabel: 'Tungsten' }, { userId: userOf.owner, name: 'Harrowmere owner', at: nowUtcMs });
+  return { labId: lab.id, rigId, userOf };
+}
