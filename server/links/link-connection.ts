@@ -79,7 +79,7 @@ export class LinkConnection {
     factory.open(handlers).then(
       (line) => {
         if (mine === this.opening) onOpened(line);
-        else line.close();
+        else void line.close();
       },
       (error: unknown) => {
         if (mine === this.opening) onFailed(messageOf(error), isNotYet(error));

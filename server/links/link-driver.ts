@@ -96,8 +96,9 @@ class LinkDriver implements TurntableLink {
   async close(): Promise<void> {
     this.connection.close();
     this.cancelHeartbeat();
-    this.letGo();
+    const closed = this.letGo();
     this.telling.flush();
+    await closed;
   }
 
   health(): LinkHealth {
@@ -212,15 +213,16 @@ class LinkDriver implements TurntableLink {
   /** The line is of no use any more. */
   private fail(condition: 'lost' | 'refused', why: string, forGood = false): void {
     const before = this.connection.condition;
-    this.letGo();
+    void this.letGo();
     this.connection.failed(condition, why, forGood);
     if (before === 'ready') this.telling.tell({ kind: 'lost', at: this.telling.now(), why });
     if (condition === 'refused' && before !== 'refused') this.telling.tell({ kind: 'refused-controller', at: this.telling.now(), why });
   }
 
-  private letGo(): void {
+  private async letGo(): Promise<void> {
     this.lease.end();
-    this.wire.detach();
+    const detached = this.wire.detach();
     this.book.each((entry) => this.wire.input(entry, { kind: 'cut-off' }));
+    await detached;
   }
 }

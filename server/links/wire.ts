@@ -61,12 +61,12 @@ export class Wire {
   }
 
   /** The line is gone; what was in flight is cut off. */
-  detach(): void {
+  async detach(): Promise<void> {
     const line = this.line;
     this.line = null;
     this.session = NO_SESSION;
     this.cutOff();
-    line?.close();
+    await line?.close();
   }
 
   openSession(session: string): void {
