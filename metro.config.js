@@ -15,10 +15,13 @@ config.resolver.resolveRequest = (context, moduleName, platform) => {
 config.server.enhanceMiddleware = (middleware) => (request, response, next) => {
   const port = process.env.EVENFALL_API_PORT;
   if (port === undefined || !request.url.startsWith('/api/')) return middleware(request, response, next);
-  const upstream = http.request({ host: '127.0.0.1', port, path: request.url, method: request.method, headers: request.headers }, (reply) => {
-    response.writeHead(reply.statusCode ?? 502, reply.headers);
-    reply.pipe(response);
-  });
+  const upstream = http.request(
+    { host: '127.0.0.1', port, path: request.url, method: request.method, headers: request.headers },
+    (reply) => {
+      response.writeHead(reply.statusCode ?? 502, reply.headers);
+      reply.pipe(response);
+    },
+  );
   upstream.on('error', () => {
     if (!response.headersSent) response.writeHead(502, { 'content-type': 'text/plain' });
     response.end('The API does not answer.');

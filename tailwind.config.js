@@ -1,6 +1,9 @@
 const token = (name) => `rgb(var(--${name}) / <alpha-value>)`;
 const colors = Object.fromEntries(
-  ['ink', 'panel', 'panel2', 'line', 'text', 'dim', 'faint', 'lamp', 'on-lamp', 'near', 'far', 'danger', 'good'].map((name) => [name, token(name)]),
+  ['ink', 'panel', 'panel2', 'line', 'text', 'dim', 'faint', 'lamp', 'on-lamp', 'near', 'far', 'danger', 'good'].map((name) => [
+    name,
+    token(name),
+  ]),
 );
 
 /** @type {import('tailwindcss').Config} */
@@ -11,7 +14,10 @@ module.exports = {
   theme: {
     extend: {
       colors,
-      fontFamily: { sans: ['Atkinson Hyperlegible Next', 'system-ui', 'sans-serif'], mono: ['Atkinson Hyperlegible Mono', 'ui-monospace', 'monospace'] },
+      fontFamily: {
+        sans: ['Atkinson Hyperlegible Next', 'system-ui', 'sans-serif'],
+        mono: ['Atkinson Hyperlegible Mono', 'ui-monospace', 'monospace'],
+      },
       borderRadius: { panel: '14px', action: '16px' },
       screens: { wide: '1024px' },
       minHeight: { target: '48px', action: '64px' },

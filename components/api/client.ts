@@ -53,7 +53,13 @@ function headersOf<R extends RouteContract>(route: R, input: CallInput<R>): Head
 async function problemOf(response: Response): Promise<ApiProblem> {
   const parsed = problemSchema.safeParse(await response.json().catch(() => undefined));
   if (parsed.success) return new ApiProblem(parsed.data);
-  return new ApiProblem({ type: '/problems/internal', title: 'Unexpected answer', status: response.status, code: 'internal', detail: `The server answered ${response.status} without saying why. Try again in a moment.` });
+  return new ApiProblem({
+    type: '/problems/internal',
+    title: 'Unexpected answer',
+    status: response.status,
+    code: 'internal',
+    detail: `The server answered ${response.status} without saying why. Try again in a moment.`,
+  });
 }
 
 type RefusedListener = () => void;
@@ -107,7 +113,13 @@ export async function call<R extends RouteContract>(route: R, input: CallInput<R
   learnTime(body, sentMs);
   const parsed = route.response.safeParse(body);
   if (!parsed.success) {
-    throw new ApiProblem({ type: '/problems/internal', title: 'Unexpected answer', status: response.status, code: 'internal', detail: 'The answer of the server was not understood. Reload the page to get its present version.' });
+    throw new ApiProblem({
+      type: '/problems/internal',
+      title: 'Unexpected answer',
+      status: response.status,
+      code: 'internal',
+      detail: 'The answer of the server was not understood. Reload the page to get its present version.',
+    });
   }
   return { data: parsed.data as ResponseOf<R>, etag };
 }

@@ -33,7 +33,8 @@ export interface ProblemWords {
 /** Any failure of a request in words for the screen. */
 export function wordsOf(error: unknown): ProblemWords {
   if (error instanceof ApiProblem) return { detail: error.detail, errors: error.errors };
-  if (error instanceof ApiUnreachable) return { detail: 'The server cannot be reached. Nothing you typed is lost; try again when the connection is back.', errors: [] };
+  if (error instanceof ApiUnreachable)
+    return { detail: 'The server cannot be reached. Nothing you typed is lost; try again when the connection is back.', errors: [] };
   return { detail: 'Something went wrong in this page. Reload it; if it happens again, tell the keeper of the lab.', errors: [] };
 }
 

@@ -14,10 +14,14 @@ interface LabQueryInput<R extends RouteContract> {
 }
 
 /** Keys begin with the lab, then the route: everything of one route is refreshed by `labKey(labId, route)`. */
-export const labKey = (labId: string, route: RouteContract, input: { params?: unknown; query?: unknown } = {}): QueryKey =>
-  [labId, route.name, ...(input.params === undefined && input.query === undefined ? [] : [input.params ?? null, input.query ?? null])];
+export const labKey = (labId: string, route: RouteContract, input: { params?: unknown; query?: unknown } = {}): QueryKey => [
+  labId,
+  route.name,
+  ...(input.params === undefined && input.query === undefined ? [] : [input.params ?? null, input.query ?? null]),
+];
 
-const withLab = <R extends RouteContract>(labId: string, params: LabParams<R> | undefined) => ({ labId, ...params }) as unknown as ParamsOf<R>;
+const withLab = <R extends RouteContract>(labId: string, params: LabParams<R> | undefined) =>
+  ({ labId, ...params }) as unknown as ParamsOf<R>;
 
 /** Reads a route of the present lab; `data` holds the body and the ETag. */
 export function useLabQuery<R extends RouteContract>(route: R, input: LabQueryInput<R> = {}): UseQueryResult<CallResult<R>> {
@@ -39,7 +43,10 @@ export function useLabCall<R extends RouteContract>(route: R): (input?: LabCallI
 }
 
 /** A change through a route of the present lab. Never tried again by itself. */
-export function useLabMutation<R extends RouteContract>(route: R, after?: (result: CallResult<R>) => void): UseMutationResult<CallResult<R>, Error, LabCallInput<R>> {
+export function useLabMutation<R extends RouteContract>(
+  route: R,
+  after?: (result: CallResult<R>) => void,
+): UseMutationResult<CallResult<R>, Error, LabCallInput<R>> {
   const send = useLabCall(route);
   return useMutation({ mutationFn: (input: LabCallInput<R>) => send(input), onSuccess: (result) => after?.(result) });
 }

@@ -14,7 +14,8 @@ export type SessionEvent =
   | { kind: 'signed-out' }
   | { kind: 'lab-chosen'; labId: string };
 
-const labOf = (me: Me, wanted: string | null): string | null => me.memberships.find((membership) => membership.labId === wanted)?.labId ?? me.memberships[0]?.labId ?? null;
+const labOf = (me: Me, wanted: string | null): string | null =>
+  me.memberships.find((membership) => membership.labId === wanted)?.labId ?? me.memberships[0]?.labId ?? null;
 
 const signedIn = (me: Me, wanted: string | null): SessionState => ({ kind: 'signed-in', me, labId: labOf(me, wanted) });
 

@@ -125,5 +125,8 @@ const rolesInWords: Record<Act, string> = {
 /** Whether the signed-in member may do `act`, and the sentence that says who may. */
 export function useMay(act: Act): { ok: boolean; why: string } {
   const { role } = useLab();
-  return { ok: may(role, act), why: `${rolesInWords[act]} You are ${role === 'owner' || role === 'operator' || role === 'analyst' ? 'an' : 'a'} ${role}.` };
+  return {
+    ok: may(role, act),
+    why: `${rolesInWords[act]} You are ${role === 'owner' || role === 'operator' || role === 'analyst' ? 'an' : 'a'} ${role}.`,
+  };
 }

@@ -19,13 +19,26 @@ export function Account() {
           </Body>
           <Label>{user.email}</Label>
         </View>
-        {memberships.length < 2 ? null : <Select label="Lab" value={labId} options={memberships.map((each) => ({ value: each.labId, label: `${each.labName} (${each.role})` }))} onChange={chooseLab} />}
+        {memberships.length < 2 ? null : (
+          <Select
+            label="Lab"
+            value={labId}
+            options={memberships.map((each) => ({ value: each.labId, label: `${each.labName} (${each.role})` }))}
+            onChange={chooseLab}
+          />
+        )}
         {failure === null ? null : (
           <Body role="alert" tone="danger">
             {failure}
           </Body>
         )}
-        <Button label="Sign out" icon="leave" className="self-start" testID="sign-out" onPress={() => void signOut().catch((error: unknown) => setFailure(wordsOf(error).detail))} />
+        <Button
+          label="Sign out"
+          icon="leave"
+          className="self-start"
+          testID="sign-out"
+          onPress={() => void signOut().catch((error: unknown) => setFailure(wordsOf(error).detail))}
+        />
       </Panel>
     </Section>
   );

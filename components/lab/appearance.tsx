@@ -41,7 +41,10 @@ export function Appearance() {
 function Sample({ name }: { name: ThemeName }) {
   const colors = themes[name];
   return (
-    <View className="h-10 flex-row items-center gap-1.5 rounded-lg border px-2" style={{ backgroundColor: colors.ink, borderColor: colors.line }}>
+    <View
+      className="h-10 flex-row items-center gap-1.5 rounded-lg border px-2"
+      style={{ backgroundColor: colors.ink, borderColor: colors.line }}
+    >
       {[colors.near, colors.far, colors.lamp].map((color) => (
         <View key={color} className="h-3 flex-1 rounded-full" style={{ backgroundColor: color }} />
       ))}

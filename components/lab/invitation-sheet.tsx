@@ -13,9 +13,23 @@ export function InvitationSheet({ invitation, onClose }: { invitation: Invitatio
     onClose();
   });
   return (
-    <Sheet open title="Invitation" onClose={onClose} footer={<Button kind="danger" icon="remove" label="Withdraw the invitation" busy={withdraw.isPending} onPress={() => withdraw.mutate({ params: { invitationId: invitation.id } })} />}>
+    <Sheet
+      open
+      title="Invitation"
+      onClose={onClose}
+      footer={
+        <Button
+          kind="danger"
+          icon="remove"
+          label="Withdraw the invitation"
+          busy={withdraw.isPending}
+          onPress={() => withdraw.mutate({ params: { invitationId: invitation.id } })}
+        />
+      }
+    >
       <Body>
-        {invitation.email} was invited as {invitation.role} by {invitation.invitedBy}. The link of the mail works until {formatDayAndClock(Date.parse(invitation.expiresAt), timeZone)}.
+        {invitation.email} was invited as {invitation.role} by {invitation.invitedBy}. The link of the mail works until{' '}
+        {formatDayAndClock(Date.parse(invitation.expiresAt), timeZone)}.
       </Body>
       {withdraw.isError ? <ProblemNotice title="The invitation was not withdrawn" {...wordsOf(withdraw.error)} /> : null}
     </Sheet>

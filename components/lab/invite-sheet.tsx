@@ -12,7 +12,10 @@ export function InviteSheet({ onClose }: { onClose: () => void }) {
   const queries = useQueryClient();
   const toast = useToast();
   const send = useLabCall(invite);
-  const { control, handleSubmit, setError, formState } = useForm({ resolver: zodResolver(invite.body), defaultValues: { email: '', role: 'operator' as const } });
+  const { control, handleSubmit, setError, formState } = useForm({
+    resolver: zodResolver(invite.body),
+    defaultValues: { email: '', role: 'operator' as const },
+  });
   const role = useController({ control, name: 'role' }).field;
   const submit = handleSubmit(async (body) => {
     try {
@@ -25,7 +28,21 @@ export function InviteSheet({ onClose }: { onClose: () => void }) {
     }
   });
   return (
-    <Sheet open title="Invite to the lab" onClose={onClose} footer={<Button kind="primary" size="action" icon="mail" label="Send the invitation" busy={formState.isSubmitting} onPress={() => void submit()} />}>
+    <Sheet
+      open
+      title="Invite to the lab"
+      onClose={onClose}
+      footer={
+        <Button
+          kind="primary"
+          size="action"
+          icon="mail"
+          label="Send the invitation"
+          busy={formState.isSubmitting}
+          onPress={() => void submit()}
+        />
+      }
+    >
       <FormField control={control} name="email" label="E-mail" type="email" onEnter={() => void submit()} />
       <Select label="Role" value={role.value} options={roleOptions} onChange={role.onChange} hint={`May: ${roleSummary[role.value]}.`} />
       {formState.errors.root === undefined ? null : (

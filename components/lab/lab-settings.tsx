@@ -16,7 +16,14 @@ export function LabSettings() {
   const name = data?.data.name ?? lab.labName;
   const timeZone = data?.data.timeZone ?? lab.timeZone;
   return (
-    <Section title="Lab" trailing={mayChange ? <IconButton icon="edit" label="Change name and time zone" onPress={() => setOpen(true)} testID="change-lab" /> : undefined}>
+    <Section
+      title="Lab"
+      trailing={
+        mayChange ? (
+          <IconButton icon="edit" label="Change name and time zone" onPress={() => setOpen(true)} testID="change-lab" />
+        ) : undefined
+      }
+    >
       <Panel className="gap-3">
         <Body strong size={17}>
           {name}
@@ -46,9 +53,29 @@ function LabSheet({ onClose, ...before }: { name: string; timeZone: string; onCl
     onClose();
   });
   return (
-    <Sheet open title="The lab" onClose={onClose} footer={<Button kind="primary" size="action" label="Save" busy={save.isPending} disabled={name.trim() === ''} onPress={() => save.mutate({ body: { name: name.trim(), timeZone } })} />}>
+    <Sheet
+      open
+      title="The lab"
+      onClose={onClose}
+      footer={
+        <Button
+          kind="primary"
+          size="action"
+          label="Save"
+          busy={save.isPending}
+          disabled={name.trim() === ''}
+          onPress={() => save.mutate({ body: { name: name.trim(), timeZone } })}
+        />
+      }
+    >
       <Field label="Name" value={name} onChange={setName} error={name.trim() === '' ? 'the lab needs a name' : undefined} />
-      <Select label="Time zone" value={timeZone} options={zones.map((zone) => ({ value: zone, label: zoneName(zone) }))} onChange={setTimeZone} hint="Times of day in protocols are meant in it. A running run keeps the zone it was started with." />
+      <Select
+        label="Time zone"
+        value={timeZone}
+        options={zones.map((zone) => ({ value: zone, label: zoneName(zone) }))}
+        onChange={setTimeZone}
+        hint="Times of day in protocols are meant in it. A running run keeps the zone it was started with."
+      />
       {save.isError ? <ProblemNotice title="The lab was not changed" {...wordsOf(save.error)} /> : null}
     </Sheet>
   );

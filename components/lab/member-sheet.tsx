@@ -23,14 +23,34 @@ export function MemberSheet({ member, onClose }: { member: MemberView; onClose: 
   const failure = change.error ?? remove.error;
   const params = { userId: member.userId };
   return (
-    <Sheet open title={member.name} onClose={onClose} footer={<Button kind="primary" size="action" label="Save the role" disabled={role === member.role} busy={change.isPending} onPress={() => change.mutate({ params, body: { role } })} />}>
+    <Sheet
+      open
+      title={member.name}
+      onClose={onClose}
+      footer={
+        <Button
+          kind="primary"
+          size="action"
+          label="Save the role"
+          disabled={role === member.role}
+          busy={change.isPending}
+          onPress={() => change.mutate({ params, body: { role } })}
+        />
+      }
+    >
       <Body tone="dim">{member.email}</Body>
       <Select label="Role" value={role} options={roleOptions} onChange={setRole} hint={`May: ${roleSummary[role]}.`} />
       {failure === null ? null : <ProblemNotice title="Nothing was changed" {...wordsOf(failure)} />}
       {asked ? (
         <View className="gap-3 rounded-panel border border-danger p-4">
           <Body>{member.name} loses access to this lab at once. What they did stays in the logs. An invitation brings them back.</Body>
-          <Button kind="danger" icon="remove" label={`Remove ${member.name}`} busy={remove.isPending} onPress={() => remove.mutate({ params })} />
+          <Button
+            kind="danger"
+            icon="remove"
+            label={`Remove ${member.name}`}
+            busy={remove.isPending}
+            onPress={() => remove.mutate({ params })}
+          />
         </View>
       ) : (
         <Button kind="quiet" label="Remove from the lab" className="self-start" onPress={() => setAsked(true)} />

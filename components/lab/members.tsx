@@ -17,10 +17,21 @@ export function Members() {
   const [member, setMember] = useState<MemberView | null>(null);
   const [invitation, setInvitation] = useState<InvitationView | null>(null);
   return (
-    <Section title="Members" trailing={mayManage ? <Button kind="quiet" icon="plus" label="Invite" onPress={() => setInviting(true)} testID="invite" /> : undefined}>
+    <Section
+      title="Members"
+      trailing={
+        mayManage ? <Button kind="quiet" icon="plus" label="Invite" onPress={() => setInviting(true)} testID="invite" /> : undefined
+      }
+    >
       <MayNote act="members.manage" />
       {list.isPending ? <Loading label="Loading members" /> : null}
-      {list.isError ? <ProblemNotice title="Members could not be read" {...wordsOf(list.error)} action={{ label: 'Try again', onPress: () => void list.refetch() }} /> : null}
+      {list.isError ? (
+        <ProblemNotice
+          title="Members could not be read"
+          {...wordsOf(list.error)}
+          action={{ label: 'Try again', onPress: () => void list.refetch() }}
+        />
+      ) : null}
       {list.data === undefined ? null : (
         <Panel className="py-1">
           {list.data.data.members.map((each) => (
@@ -71,7 +82,15 @@ function Line({ title, under, chip, label, onPress }: LineProps) {
 function MemberRow({ member, onPress }: { member: MemberView; onPress?: (() => void) | undefined }) {
   const { state } = useSession();
   const own = state.kind === 'signed-in' && state.me.user.id === member.userId;
-  return <Line title={own ? `${member.name} (you)` : member.name} under={member.email} chip={member.role} label={`${member.name}, ${member.role}: change role or remove`} onPress={onPress} />;
+  return (
+    <Line
+      title={own ? `${member.name} (you)` : member.name}
+      under={member.email}
+      chip={member.role}
+      label={`${member.name}, ${member.role}: change role or remove`}
+      onPress={onPress}
+    />
+  );
 }
 
 function InvitationRow({ invitation, onPress }: { invitation: InvitationView; onPress?: (() => void) | undefined }) {

@@ -34,7 +34,13 @@ export function RoleMatrix() {
               </th>
               {row.allowed.map((ok, index) => (
                 <td key={roles[index]} className="px-1 py-2">
-                  <span className="flex justify-center">{ok ? <Icon name="tick" size={16} tone={roles[index] === own ? 'lamp' : 'dim'} label="yes" /> : <span className="sr-only">no</span>}</span>
+                  <span className="flex justify-center">
+                    {ok ? (
+                      <Icon name="tick" size={16} tone={roles[index] === own ? 'lamp' : 'dim'} label="yes" />
+                    ) : (
+                      <span className="sr-only">no</span>
+                    )}
+                  </span>
                 </td>
               ))}
             </tr>

@@ -27,4 +27,8 @@ export const roleSummary: Record<Role, string> = {
 };
 
 /** The matrix as rows for a table: act in words, and for each role whether it may. */
-export const matrixRows = (Object.keys(acts) as Act[]).map((act) => ({ act, words: actWords[act], allowed: roles.map((role) => (acts[act] as readonly Role[]).includes(role)) }));
+export const matrixRows = (Object.keys(acts) as Act[]).map((act) => ({
+  act,
+  words: actWords[act],
+  allowed: roles.map((role) => (acts[act] as readonly Role[]).includes(role)),
+}));

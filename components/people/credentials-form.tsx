@@ -13,7 +13,10 @@ interface CredentialsFormProps {
 
 /** E-mail and password; what was typed stays when the server refuses. */
 export function CredentialsForm({ email, onSignedIn }: CredentialsFormProps) {
-  const { control, handleSubmit, setError, formState } = useForm({ resolver: zodResolver(signIn.body), defaultValues: { email: email ?? '', password: '' } });
+  const { control, handleSubmit, setError, formState } = useForm({
+    resolver: zodResolver(signIn.body),
+    defaultValues: { email: email ?? '', password: '' },
+  });
   const submit = handleSubmit(async (body) => {
     try {
       onSignedIn((await call(signIn, { body })).data);
@@ -33,7 +36,15 @@ export function CredentialsForm({ email, onSignedIn }: CredentialsFormProps) {
     >
       <View className="gap-5">
         <FormField control={control} name="email" label="E-mail" type="email" autoComplete="username" testID="sign-in-email" />
-        <FormField control={control} name="password" label="Password" type="password" autoComplete="current-password" onEnter={send} testID="sign-in-password" />
+        <FormField
+          control={control}
+          name="password"
+          label="Password"
+          type="password"
+          autoComplete="current-password"
+          onEnter={send}
+          testID="sign-in-password"
+        />
         {formState.errors.root === undefined ? null : (
           <Body role="alert" tone="danger">
             {formState.errors.root.message}

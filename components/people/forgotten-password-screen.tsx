@@ -11,7 +11,10 @@ import { TextLink } from './sign-in-screen';
 /** Asks for a reset link. The answer is the same whether the address is known or not. */
 export function ForgottenPasswordScreen() {
   const [sentTo, setSentTo] = useState<string | null>(null);
-  const { control, handleSubmit, setError, formState } = useForm({ resolver: zodResolver(requestPasswordReset.body), defaultValues: { email: '' } });
+  const { control, handleSubmit, setError, formState } = useForm({
+    resolver: zodResolver(requestPasswordReset.body),
+    defaultValues: { email: '' },
+  });
   const submit = handleSubmit(async (body) => {
     try {
       await call(requestPasswordReset, { body });

@@ -37,7 +37,10 @@ export function InvitationScreen() {
 function AcceptForm({ token, hasAccount }: { token: string; hasAccount: boolean }) {
   const { signedIn } = useSession();
   const router = useRouter();
-  const { control, handleSubmit, setError, formState } = useForm({ resolver: zodResolver(hasAccount ? knownSchema : newcomerSchema), defaultValues: { name: '', password: '' } });
+  const { control, handleSubmit, setError, formState } = useForm({
+    resolver: zodResolver(hasAccount ? knownSchema : newcomerSchema),
+    defaultValues: { name: '', password: '' },
+  });
   const submit = handleSubmit(async ({ name, password }) => {
     try {
       const { data } = await call(acceptInvitation, { params: { token }, body: hasAccount ? { password } : { name, password } });
@@ -49,8 +52,26 @@ function AcceptForm({ token, hasAccount }: { token: string; hasAccount: boolean 
   });
   return (
     <View className="gap-5">
-      {hasAccount ? <Body tone="dim">You have an account here already: give its password to join.</Body> : <FormField control={control} name="name" label="Your name" autoComplete="name" hint="As the step log and the audit shall show it." />}
-      <FormField control={control} name="password" label="Password" type="password" autoComplete={hasAccount ? 'current-password' : 'new-password'} hint={hasAccount ? undefined : 'At least 12 characters. A few words in a row are good.'} onEnter={() => void submit()} />
+      {hasAccount ? (
+        <Body tone="dim">You have an account here already: give its password to join.</Body>
+      ) : (
+        <FormField
+          control={control}
+          name="name"
+          label="Your name"
+          autoComplete="name"
+          hint="As the step log and the audit shall show it."
+        />
+      )}
+      <FormField
+        control={control}
+        name="password"
+        label="Password"
+        type="password"
+        autoComplete={hasAccount ? 'current-password' : 'new-password'}
+        hint={hasAccount ? undefined : 'At least 12 characters. A few words in a row are good.'}
+        onEnter={() => void submit()}
+      />
       {formState.errors.root === undefined ? null : (
         <Body role="alert" tone="danger">
           {formState.errors.root.message}

@@ -13,7 +13,12 @@ interface PublicPageProps {
 /** The frame of the pages that need no session: the mark, one heading, one column. */
 export function PublicPage({ title, intro, children }: PublicPageProps) {
   return (
-    <ScrollView role="main" className="flex-1 bg-ink" contentContainerClassName="min-h-full items-center justify-center px-4 py-10" keyboardShouldPersistTaps="handled">
+    <ScrollView
+      role="main"
+      className="flex-1 bg-ink"
+      contentContainerClassName="min-h-full items-center justify-center px-4 py-10"
+      keyboardShouldPersistTaps="handled"
+    >
       <View className="w-full max-w-[400px] gap-6">
         <View className="gap-5">
           <Mark />

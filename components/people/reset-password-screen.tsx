@@ -40,7 +40,15 @@ export function ResetPasswordScreen() {
         </Panel>
       ) : (
         <View className="gap-5">
-          <FormField control={control} name="password" label="New password" type="password" autoComplete="new-password" hint="At least 12 characters. A few words in a row are good." onEnter={() => void submit()} />
+          <FormField
+            control={control}
+            name="password"
+            label="New password"
+            type="password"
+            autoComplete="new-password"
+            hint="At least 12 characters. A few words in a row are good."
+            onEnter={() => void submit()}
+          />
           {formState.errors.root === undefined ? null : (
             <Body role="alert" tone="danger">
               {formState.errors.root.message}

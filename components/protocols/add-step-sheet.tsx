@@ -15,7 +15,8 @@ const kinds: readonly StepKind[] = ['swing', 'dwell', 'repeat', 'settle', 'wait'
 function freshStep(kind: StepKind, rig: RigDocument, lastTarget: string): Step {
   const beat: Step = rig.measured?.period_s === undefined ? { kind: 'dwell', for_s: 900 } : { kind: 'dwell', beat_periods: 2 };
   if (kind === 'repeat') return { kind, times: 8, steps: [{ kind: 'swing', to: 'far' }, beat, { kind: 'swing', to: 'near' }, beat] };
-  if (kind === 'swing' && rig.stations['near'] !== undefined && rig.stations['far'] !== undefined) return { kind, to: lastTarget === 'near' ? 'far' : 'near' };
+  if (kind === 'swing' && rig.stations['near'] !== undefined && rig.stations['far'] !== undefined)
+    return { kind, to: lastTarget === 'near' ? 'far' : 'near' };
   if (kind === 'dwell' && lastTarget !== '') return beat;
   return newStep(kind, rig);
 }
@@ -28,18 +29,40 @@ export function AddStepSheet({ rig, onClose }: { rig: RigDocument | null; onClos
   const isRepeat = editor.selectedStep?.kind === 'repeat';
   const [place, setPlace] = useState<'after' | 'inside'>(isRepeat ? 'inside' : 'after');
   const reference = editor.selectedStep ?? editor.document.steps.at(-1) ?? null;
-  const where = editor.selectedStep === null ? 'At the end of the protocol.' : place === 'inside' ? `At the end of “${stepTitle(editor.selectedStep)}”.` : `After “${stepTitle(editor.selectedStep)}”.`;
+  const where =
+    editor.selectedStep === null
+      ? 'At the end of the protocol.'
+      : place === 'inside'
+        ? `At the end of “${stepTitle(editor.selectedStep)}”.`
+        : `After “${stepTitle(editor.selectedStep)}”.`;
   const add = (kind: StepKind) => {
     editor.insert(freshStep(kind, rig ?? demoRigWide, lastTargetBefore(reference)), place);
     onClose();
   };
   return (
     <Sheet open title="Add a step" onClose={onClose} testID="add-step-sheet">
-      {isRepeat ? <Tabs label="Where" value={place} options={[{ value: 'inside', label: 'Inside' }, { value: 'after', label: 'After' }]} onChange={setPlace} /> : null}
+      {isRepeat ? (
+        <Tabs
+          label="Where"
+          value={place}
+          options={[
+            { value: 'inside', label: 'Inside' },
+            { value: 'after', label: 'After' },
+          ]}
+          onChange={setPlace}
+        />
+      ) : null}
       <Label>{where}</Label>
       <View>
         {kinds.filter(isBuilt).map((kind) => (
-          <Pressable key={kind} role="button" aria-label={`Add ${kindNames[kind]}: ${kindUses[kind] ?? ''}`} onPress={() => add(kind)} testID={`add-${kind}`} className="-mx-2 min-h-action flex-row items-center gap-4 rounded-panel px-2 py-2 hover:bg-panel2">
+          <Pressable
+            key={kind}
+            role="button"
+            aria-label={`Add ${kindNames[kind]}: ${kindUses[kind] ?? ''}`}
+            onPress={() => add(kind)}
+            testID={`add-${kind}`}
+            className="-mx-2 min-h-action flex-row items-center gap-4 rounded-panel px-2 py-2 hover:bg-panel2"
+          >
             <View className="h-10 w-10 items-center justify-center rounded-xl bg-panel2">
               <Icon name={stepIcons[kind]} tone="lamp" />
             </View>

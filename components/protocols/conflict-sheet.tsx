@@ -18,13 +18,26 @@ interface ConflictSheetProps {
 export function ConflictSheet({ protocolId, mine, sync, onTheirs }: ConflictSheetProps) {
   const { labId, timeZone } = useLab();
   const read = useLabCall(getProtocol);
-  const theirs = useQuery({ queryKey: [labId, 'conflict', protocolId], queryFn: () => read({ params: { protocolId } }), gcTime: 0, staleTime: 0 });
+  const theirs = useQuery({
+    queryKey: [labId, 'conflict', protocolId],
+    queryFn: () => read({ params: { protocolId } }),
+    gcTime: 0,
+    staleTime: 0,
+  });
   const view = theirs.data?.data;
   const etag = theirs.data?.etag ?? null;
   if (view === undefined || etag === null) {
     return (
       <Sheet open title="Saved by somebody else" onClose={() => undefined} mustAnswer>
-        {theirs.isError ? <ProblemNotice title="Their draft could not be read" {...wordsOf(theirs.error)} action={{ label: 'Try again', onPress: () => void theirs.refetch() }} /> : <Loading label="Reading the other draft" />}
+        {theirs.isError ? (
+          <ProblemNotice
+            title="Their draft could not be read"
+            {...wordsOf(theirs.error)}
+            action={{ label: 'Try again', onPress: () => void theirs.refetch() }}
+          />
+        ) : (
+          <Loading label="Reading the other draft" />
+        )}
       </Sheet>
     );
   }
@@ -41,13 +54,20 @@ export function ConflictSheet({ protocolId, mine, sync, onTheirs }: ConflictShee
       testID="conflict-sheet"
       footer={
         <>
-          <Button kind="primary" size="action" label="Keep mine, over theirs" onPress={() => sync.adopt(etag, view.document)} testID="keep-mine" />
+          <Button
+            kind="primary"
+            size="action"
+            label="Keep mine, over theirs"
+            onPress={() => sync.adopt(etag, view.document)}
+            testID="keep-mine"
+          />
           <Button size="action" label="Take theirs" onPress={takeTheirs} testID="take-theirs" />
         </>
       }
     >
       <Body>
-        {view.updatedBy} saved this draft at {formatDayAndClock(Date.parse(view.updatedAt), timeZone)}, after you opened it. Yours is not saved yet. If you take theirs, undo brings yours back.
+        {view.updatedBy} saved this draft at {formatDayAndClock(Date.parse(view.updatedAt), timeZone)}, after you opened it. Yours is not
+        saved yet. If you take theirs, undo brings yours back.
       </Body>
       <Section title="From theirs to mine">
         <DifferencesList before={view.document} after={mine} />

@@ -35,7 +35,13 @@ function valueWords(field: string, value: unknown): string {
   if (field === 'for_s' && typeof value === 'number') return formatDuration(value);
   if (field.endsWith('periods') && typeof value === 'number') return `${value} T`;
   if (typeof value === 'string') return value === '' ? 'empty' : value;
-  if (typeof value === 'object' && value !== null) return Object.entries(value).map(([name, inner]) => `${name === 'angle_deg' ? '' : `${name} `}${typeof inner === 'object' ? JSON.stringify(inner) : String(inner)}${name === 'angle_deg' ? '°' : ''}`).join(', ');
+  if (typeof value === 'object' && value !== null)
+    return Object.entries(value)
+      .map(
+        ([name, inner]) =>
+          `${name === 'angle_deg' ? '' : `${name} `}${typeof inner === 'object' ? JSON.stringify(inner) : String(inner)}${name === 'angle_deg' ? '°' : ''}`,
+      )
+      .join(', ');
   return String(value);
 }
 
@@ -46,16 +52,30 @@ const stepLine = (value: unknown): string => {
 };
 
 /** The positions of a step's path: `2.repeat.1.swing` → `2.1`. */
-const place = (path: string | null): string => (path ?? '').split('.').filter((_, index) => index % 2 === 0).join('.');
+const place = (path: string | null): string =>
+  (path ?? '')
+    .split('.')
+    .filter((_, index) => index % 2 === 0)
+    .join('.');
 
 /** One difference between two protocols in words. */
 export function differenceWords(difference: Difference): DifferenceWords {
   const { kind, field, pathBefore, pathAfter, before, after } = difference;
   const path = pathAfter ?? pathBefore;
   if (field === '') {
-    return { mark: kind, where: `Step ${place(path)}`, before: before === undefined ? '' : stepLine(before), after: after === undefined ? '' : stepLine(after) };
+    return {
+      mark: kind,
+      where: `Step ${place(path)}`,
+      before: before === undefined ? '' : stepLine(before),
+      after: after === undefined ? '' : stepLine(after),
+    };
   }
   const name = fieldNames[field] ?? field;
   const kindOf = path?.split('.').at(-1) ?? '';
-  return { mark: kind, where: path === null ? name : `Step ${place(path)}, ${kindOf}: ${name.toLowerCase()}`, before: valueWords(field, before), after: valueWords(field, after) };
+  return {
+    mark: kind,
+    where: path === null ? name : `Step ${place(path)}, ${kindOf}: ${name.toLowerCase()}`,
+    before: valueWords(field, before),
+    after: valueWords(field, after),
+  };
 }

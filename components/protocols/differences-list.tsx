@@ -21,7 +21,9 @@ export function DifferencesList({ before, after }: { before: ProtocolDocument; a
             <Label>
               {difference.where}, {difference.mark}
             </Label>
-            {difference.before === '' ? null : <Body tone="dim">{difference.mark === 'changed' ? `was ${difference.before}` : difference.before}</Body>}
+            {difference.before === '' ? null : (
+              <Body tone="dim">{difference.mark === 'changed' ? `was ${difference.before}` : difference.before}</Body>
+            )}
             {difference.after === '' ? null : <Body>{difference.mark === 'changed' ? `is ${difference.after}` : difference.after}</Body>}
           </View>
         </View>

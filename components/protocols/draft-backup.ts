@@ -30,15 +30,23 @@ export function dropBackup(protocolId: string): void {
 function filled(value: unknown): unknown {
   if (Array.isArray(value)) return value.map(filled);
   if (typeof value !== 'object' || value === null) return value;
-  return Object.fromEntries(Object.entries(value).map(([name, inner]) => [name, name === 'steps' && Array.isArray(inner) && inner.length === 0 ? [{ kind: 'home' }] : filled(inner)]));
+  return Object.fromEntries(
+    Object.entries(value).map(([name, inner]) => [
+      name,
+      name === 'steps' && Array.isArray(inner) && inner.length === 0 ? [{ kind: 'home' }] : filled(inner),
+    ]),
+  );
 }
 
 /** The kept draft, or null where there is none that the editor can show. */
 export function readBackup(protocolId: string): DraftBackup | null {
   try {
     const value: unknown = JSON.parse(window.localStorage.getItem(keyOf(protocolId)) ?? 'null');
-    if (typeof value !== 'object' || value === null || !('etag' in value) || !('document' in value) || typeof value.etag !== 'string') return null;
-    return protocolDocumentSchema.safeParse(filled(value.document)).success ? { etag: value.etag, document: value.document as ProtocolDocument } : null;
+    if (typeof value !== 'object' || value === null || !('etag' in value) || !('document' in value) || typeof value.etag !== 'string')
+      return null;
+    return protocolDocumentSchema.safeParse(filled(value.document)).success
+      ? { etag: value.etag, document: value.document as ProtocolDocument }
+      : null;
   } catch {
     return null;
   }

@@ -26,12 +26,36 @@ export function EditorFooter({ protocol, status, onOpen }: EditorFooterProps) {
     <View className="gap-2 wide:flex-row-reverse wide:items-center wide:gap-6">
       <EditorToolbar />
       <View className="flex-1 flex-row gap-2">
-        <IconButton icon="plus" label="Add a step" tone="lamp" onPress={() => onOpen('add')} className="min-h-action w-16 bg-panel2" testID="add-step" />
+        <IconButton
+          icon="plus"
+          label="Add a step"
+          tone="lamp"
+          onPress={() => onOpen('add')}
+          className="min-h-action w-16 bg-panel2"
+          testID="add-step"
+        />
         <Button size="action" label="Rehearse" onPress={() => onOpen('rehearse')} className="px-4" testID="rehearse" />
         {issued && rig !== null && mayStart ? (
-          <Button size="action" kind="primary" icon="start" label="Start" accessibilityLabel={`Start revision ${protocol.latestRevision ?? 1} on ${rig.name}`} onPress={start} className="flex-1 px-2" testID="start-revision" />
+          <Button
+            size="action"
+            kind="primary"
+            icon="start"
+            label="Start"
+            accessibilityLabel={`Start revision ${protocol.latestRevision ?? 1} on ${rig.name}`}
+            onPress={start}
+            className="flex-1 px-2"
+            testID="start-revision"
+          />
         ) : (
-          <Button size="action" kind="primary" label={`Issue rev ${(protocol.latestRevision ?? 0) + 1}`} disabled={issued} onPress={() => onOpen('issue')} className="flex-1 px-2" testID="issue" />
+          <Button
+            size="action"
+            kind="primary"
+            label={`Issue rev ${(protocol.latestRevision ?? 0) + 1}`}
+            disabled={issued}
+            onPress={() => onOpen('issue')}
+            className="flex-1 px-2"
+            testID="issue"
+          />
         )}
       </View>
     </View>

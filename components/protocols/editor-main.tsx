@@ -43,7 +43,9 @@ export function EditorMain({ sync, startAt, planning, restored }: EditorMainProp
       )}
       <StepList />
       {wide ? null : <FindingsList />}
-      <Label className="hidden wide:flex">Arrows choose a step, Alt and arrows move it, Enter opens its details, Delete deletes it, Ctrl+Z undoes.</Label>
+      <Label className="hidden wide:flex">
+        Arrows choose a step, Alt and arrows move it, Enter opens its details, Delete deletes it, Ctrl+Z undoes.
+      </Label>
     </>
   );
 }
@@ -57,7 +59,16 @@ function Strip() {
   const selectedKey = documentPath === null ? null : (plan.spans.get(documentPath)?.firstKey ?? null);
   return (
     <Panel className="px-3 pb-3 pt-4">
-      <SwingStrip steps={plan.strip} timeZone={timeZone} title={document.name} predicted={plan.predicted} equilibrium={plan.equilibrium} selectedKey={selectedKey} onSelect={(key) => select(parseStepPath(key))} heightPx={wide ? 190 : 132} />
+      <SwingStrip
+        steps={plan.strip}
+        timeZone={timeZone}
+        title={document.name}
+        predicted={plan.predicted}
+        equilibrium={plan.equilibrium}
+        selectedKey={selectedKey}
+        onSelect={(key) => select(parseStepPath(key))}
+        heightPx={wide ? 190 : 132}
+      />
     </Panel>
   );
 }

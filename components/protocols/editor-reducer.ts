@@ -27,14 +27,21 @@ function nearest(document: ProtocolDocument, path: StepPath | null): StepPath | 
   return null;
 }
 
-const withHistory = (state: EditorState, history: History, path: StepPath | null): EditorState => ({ history, selected: nearest(history.present, path) });
+const withHistory = (state: EditorState, history: History, path: StepPath | null): EditorState => ({
+  history,
+  selected: nearest(history.present, path),
+});
 
 /** The editor as a pure function of what is done in it. */
 export function editorReducer(state: EditorState, action: EditorAction): EditorState {
   switch (action.kind) {
     case 'change': {
       const { edited, mergeKey } = action;
-      return withHistory(state, historyReducer(state.history, { kind: 'edit', document: edited.document, ...(mergeKey === undefined ? {} : { mergeKey }) }), edited.path);
+      return withHistory(
+        state,
+        historyReducer(state.history, { kind: 'edit', document: edited.document, ...(mergeKey === undefined ? {} : { mergeKey }) }),
+        edited.path,
+      );
     }
     case 'document':
       return withHistory(state, historyReducer(state.history, { ...action, kind: 'edit' }), state.selected);
@@ -48,8 +55,10 @@ export function editorReducer(state: EditorState, action: EditorAction): EditorS
 
 /** All steps as rows in reading order: paths for the arrow keys. */
 export function rowPaths(document: ProtocolDocument): StepPath[] {
-  const walk = (steps: ProtocolDocument['steps'], around: StepPath): StepPath[] => steps.flatMap((step, index) => [[...around, index + 1], ...(step.kind === 'repeat' ? walk(step.steps, [...around, index + 1]) : [])]);
+  const walk = (steps: ProtocolDocument['steps'], around: StepPath): StepPath[] =>
+    steps.flatMap((step, index) => [[...around, index + 1], ...(step.kind === 'repeat' ? walk(step.steps, [...around, index + 1]) : [])]);
   return walk(document.steps, []);
 }
 
-export const samePath = (a: StepPath | null, b: StepPath | null): boolean => a !== null && b !== null && a.length === b.length && a.every((position, index) => position === b[index]);
+export const samePath = (a: StepPath | null, b: StepPath | null): boolean =>
+  a !== null && b !== null && a.length === b.length && a.every((position, index) => position === b[index]);

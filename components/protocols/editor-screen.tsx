@@ -12,7 +12,15 @@ export function EditorScreen() {
   if (query.data === undefined || etag === null) {
     return (
       <Screen title="Protocol" back={{ href: '/protocols', label: 'protocols' }}>
-        {query.isError ? <ProblemNotice title="The protocol could not be read" {...wordsOf(query.error)} action={{ label: 'Try again', onPress: () => void query.refetch() }} /> : <Loading label="Loading the protocol" />}
+        {query.isError ? (
+          <ProblemNotice
+            title="The protocol could not be read"
+            {...wordsOf(query.error)}
+            action={{ label: 'Try again', onPress: () => void query.refetch() }}
+          />
+        ) : (
+          <Loading label="Loading the protocol" />
+        )}
       </Screen>
     );
   }

@@ -26,7 +26,8 @@ interface EditorSheetsProps {
 export function EditorSheets({ open, onOpen, protocol, sync, details }: EditorSheetsProps) {
   const editor = useEditor();
   const close = () => onOpen(null);
-  if (sync.state.status === 'overtaken') return <ConflictSheet protocolId={protocol.id} mine={editor.document} sync={sync} onTheirs={editor.putDocument} />;
+  if (sync.state.status === 'overtaken')
+    return <ConflictSheet protocolId={protocol.id} mine={editor.document} sync={sync} onTheirs={editor.putDocument} />;
   switch (open) {
     case 'step':
       return editor.selected === null || editor.selectedStep === null ? null : (

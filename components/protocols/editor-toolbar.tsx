@@ -15,7 +15,12 @@ export function EditorToolbar() {
       <IconButton icon="up" label="Move up" onPress={editor.moveUp} disabled={none} testID="move-up" />
       <IconButton icon="down" label="Move down" onPress={editor.moveDown} disabled={none} testID="move-down" />
       {isRepeat || inRepeat ? (
-        <IconButton icon="unnest" label={isRepeat ? 'Take the steps out of the repeat' : 'Take out of the repeat'} onPress={editor.unnest} testID="unnest" />
+        <IconButton
+          icon="unnest"
+          label={isRepeat ? 'Take the steps out of the repeat' : 'Take out of the repeat'}
+          onPress={editor.unnest}
+          testID="unnest"
+        />
       ) : (
         <IconButton icon="nest" label="Put into a repeat" onPress={editor.nest} disabled={none} testID="nest" />
       )}

@@ -29,7 +29,12 @@ export function Editor({ protocol, etag }: EditorProps) {
   const mayWrite = useMay('protocol.write').ok;
   const [begin] = useState(() => ({ etag, document: protocol.document, backup: readBackup(protocol.id) }));
   const state = useEditorState(begin.backup?.document ?? begin.document);
-  const sync = useDraftSync({ protocolId: protocol.id, document: state.document, begin: begin.backup === null ? begin : { etag: begin.backup.etag, document: begin.document }, mayWrite });
+  const sync = useDraftSync({
+    protocolId: protocol.id,
+    document: state.document,
+    begin: begin.backup === null ? begin : { etag: begin.backup.etag, document: begin.document },
+    mayWrite,
+  });
   useAdopted({ protocol, etag, sync, put: state.putDocument });
   const planning = usePlanningRig();
   const [startAt, setStartAt] = useState('');
@@ -37,7 +42,10 @@ export function Editor({ protocol, etag }: EditorProps) {
   const [sheet, setSheet] = useState<EditorSheet>(null);
   const { select } = state;
   const openDetails = useCallback((path: StepPath) => (wide ? focusDetails() : (select(path), setSheet('step'))), [wide, select]);
-  const editor = useMemo<EditorApi>(() => ({ ...state, plan, rig: planning.rig, timeZone, mayWrite, openDetails }), [state, plan, planning.rig, timeZone, mayWrite, openDetails]);
+  const editor = useMemo<EditorApi>(
+    () => ({ ...state, plan, rig: planning.rig, timeZone, mayWrite, openDetails }),
+    [state, plan, planning.rig, timeZone, mayWrite, openDetails],
+  );
   useHistoryKeys(mayWrite ? state : { undo: null, redo: null });
   const details = { planning, startAt, onStartAt: setStartAt };
   return (
@@ -60,5 +68,11 @@ export function Editor({ protocol, etag }: EditorProps) {
 
 /** When wide, the details stand in the right pane already: Enter leads into them. */
 function focusDetails(): void {
-  requestAnimationFrame(() => document.querySelector<HTMLElement>('[data-testid="editor-aside"] input, [data-testid="editor-aside"] select, [data-testid="editor-aside"] [role="radio"][tabindex="0"]')?.focus());
+  requestAnimationFrame(() =>
+    document
+      .querySelector<HTMLElement>(
+        '[data-testid="editor-aside"] input, [data-testid="editor-aside"] select, [data-testid="editor-aside"] [role="radio"][tabindex="0"]',
+      )
+      ?.focus(),
+  );
 }

@@ -23,10 +23,17 @@ export function Figures({ plan, timeZone, startAt }: { plan: Plan; timeZone: str
   return (
     <View className="flex-row flex-wrap items-start gap-x-6 gap-y-2">
       <View>
-        <Num size={44} light testID="finish-time" aria-label={`Finish at ${formatClock(end, { timeZone })} ${weekday}, ${zoneName(timeZone)}`}>
+        <Num
+          size={44}
+          light
+          testID="finish-time"
+          aria-label={`Finish at ${formatClock(end, { timeZone })} ${weekday}, ${zoneName(timeZone)}`}
+        >
           {plan.timeline.truncated ? '–' : formatClock(end, { timeZone })}
         </Num>
-        <Label>{plan.timeline.truncated ? 'no end in sight' : `finish ${weekday}, ${startAt === '' ? 'started now' : `started at ${startAt}`}`}</Label>
+        <Label>
+          {plan.timeline.truncated ? 'no end in sight' : `finish ${weekday}, ${startAt === '' ? 'started now' : `started at ${startAt}`}`}
+        </Label>
         <Label>{zoneName(timeZone)}</Label>
       </View>
       <View className="gap-2 pt-1.5 wide:flex-row wide:gap-6">

@@ -57,7 +57,13 @@ function FindingLine({ finding, wrong }: { finding: Finding; wrong: boolean }) {
   );
   if (path === null || step === null) return <View className={shape}>{inside}</View>;
   return (
-    <Pressable role="button" aria-label={`${finding.message} Go to step ${path.join('.')}`} onPress={() => (select(path), openDetails(path))} className={`${shape} hover:bg-panel2`} testID={`finding-${finding.code}`}>
+    <Pressable
+      role="button"
+      aria-label={`${finding.message} Go to step ${path.join('.')}`}
+      onPress={() => (select(path), openDetails(path))}
+      className={`${shape} hover:bg-panel2`}
+      testID={`finding-${finding.code}`}
+    >
       {inside}
     </Pressable>
   );

@@ -23,17 +23,44 @@ export function IssueSheet({ protocol, sync, onClose }: IssueSheetProps) {
   const issue = useIssue({ protocol, sync, note, onDone: onClose });
   const ready = rig !== null && findings.length === 0;
   return (
-    <Sheet open title={`Issue revision ${next}`} onClose={onClose} testID="issue-sheet" footer={<Button kind="primary" size="action" label={`Issue revision ${next}`} disabled={!ready} busy={issue.busy} onPress={() => void issue.send(rig?.id ?? '')} testID="issue-confirm" />}>
+    <Sheet
+      open
+      title={`Issue revision ${next}`}
+      onClose={onClose}
+      testID="issue-sheet"
+      footer={
+        <Button
+          kind="primary"
+          size="action"
+          label={`Issue revision ${next}`}
+          disabled={!ready}
+          busy={issue.busy}
+          onPress={() => void issue.send(rig?.id ?? '')}
+          testID="issue-confirm"
+        />
+      }
+    >
       {rig === null ? <Body>A revision is checked against a rig, and this lab has none yet.</Body> : null}
       {findings.length > 0 ? (
-        <ProblemNotice title={`${findings.length} ${findings.length === 1 ? 'thing stands' : 'things stand'} against it on ${rig?.name ?? 'this rig'}`} detail="Put these right first; each is marked at its step." errors={findings.map(({ path, message }) => ({ path: path ?? '', message }))} />
+        <ProblemNotice
+          title={`${findings.length} ${findings.length === 1 ? 'thing stands' : 'things stand'} against it on ${rig?.name ?? 'this rig'}`}
+          detail="Put these right first; each is marked at its step."
+          errors={findings.map(({ path, message }) => ({ path: path ?? '', message }))}
+        />
       ) : rig === null ? null : (
         <View className="flex-row items-center gap-2">
           <Icon name="passed" tone="good" />
           <Body className="flex-1">Checked against {rig.name}: it can be carried out.</Body>
         </View>
       )}
-      <Field label="Note" value={note} onChange={setNote} placeholder="what is different and why" hint="An issued revision never changes; runs refer to it for ever." testID="issue-note" />
+      <Field
+        label="Note"
+        value={note}
+        onChange={setNote}
+        placeholder="what is different and why"
+        hint="An issued revision never changes; runs refer to it for ever."
+        testID="issue-note"
+      />
       {issue.problem === null ? null : <ProblemNotice title="The revision was not issued" {...issue.problem} />}
       <ChangesSinceLast protocol={protocol} />
     </Sheet>
@@ -43,9 +70,20 @@ export function IssueSheet({ protocol, sync, onClose }: IssueSheetProps) {
 function ChangesSinceLast({ protocol }: { protocol: ProtocolView }) {
   const { document } = useEditor();
   const latest = protocol.latestRevision;
-  const revision = useLabQuery(getRevision, { params: { protocolId: protocol.id, revision: String(latest ?? 0) }, enabled: latest !== null });
+  const revision = useLabQuery(getRevision, {
+    params: { protocolId: protocol.id, revision: String(latest ?? 0) },
+    enabled: latest !== null,
+  });
   if (latest === null) return <Label>It will be the first revision.</Label>;
-  return <Section title={`Changes since revision ${latest}`}>{revision.data === undefined ? <Loading label={`Reading revision ${latest}`} /> : <DifferencesList before={revision.data.data.document} after={document} />}</Section>;
+  return (
+    <Section title={`Changes since revision ${latest}`}>
+      {revision.data === undefined ? (
+        <Loading label={`Reading revision ${latest}`} />
+      ) : (
+        <DifferencesList before={revision.data.data.document} after={document} />
+      )}
+    </Section>
+  );
 }
 
 interface IssueInput {
@@ -68,7 +106,8 @@ function useIssue({ protocol, sync, note, onDone }: IssueInput) {
     setProblem(null);
     try {
       const ifMatch = await sync.flush();
-      if (ifMatch === null) return setProblem({ detail: 'The draft is not saved yet, and only a saved draft is issued. See why under the title.', errors: [] });
+      if (ifMatch === null)
+        return setProblem({ detail: 'The draft is not saved yet, and only a saved draft is issued. See why under the title.', errors: [] });
       const { data } = await send({ params: { protocolId: protocol.id }, ifMatch, body: { rigId, note: note.trim() } });
       for (const route of [getProtocol, listProtocols]) await queries.invalidateQueries({ queryKey: labKey(labId, route) });
       toast.show({ text: `Revision ${data.number} is issued.` });

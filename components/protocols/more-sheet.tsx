@@ -31,9 +31,27 @@ export function MoreSheet({ protocol, sync, onClose, onDetails }: MoreSheetProps
     <Sheet open title={document.name} onClose={onClose} testID="more-sheet">
       <View className="gap-2">
         <Button icon="edit" label="Name, interruption, end, planned start" onPress={onDetails} testID="open-protocol-details" />
-        <Button icon="compare" label={`Revisions (${protocol.revisions.length}) and comparison`} onPress={() => void go(`/protocols/${protocol.id}/revisions`)} testID="open-revisions" />
-        <Button icon="export" label="Save as JSON" onPress={() => saveTextFile(`${fileNameOf(document.name)}.protocol.json`, exportProtocolText(document))} testID="export-protocol" />
-        {mayWrite ? <Button icon="duplicate" label="Make a copy" busy={copy.isPending} onPress={() => copy.mutate({ body: { document: { ...document, name: `${document.name}, copy`.slice(0, 120) } } })} testID="copy-protocol" /> : null}
+        <Button
+          icon="compare"
+          label={`Revisions (${protocol.revisions.length}) and comparison`}
+          onPress={() => void go(`/protocols/${protocol.id}/revisions`)}
+          testID="open-revisions"
+        />
+        <Button
+          icon="export"
+          label="Save as JSON"
+          onPress={() => saveTextFile(`${fileNameOf(document.name)}.protocol.json`, exportProtocolText(document))}
+          testID="export-protocol"
+        />
+        {mayWrite ? (
+          <Button
+            icon="duplicate"
+            label="Make a copy"
+            busy={copy.isPending}
+            onPress={() => copy.mutate({ body: { document: { ...document, name: `${document.name}, copy`.slice(0, 120) } } })}
+            testID="copy-protocol"
+          />
+        ) : null}
       </View>
       {copy.isError ? <ProblemNotice title="No copy was made" {...wordsOf(copy.error)} /> : null}
       {mayWrite ? <Deletion protocol={protocol} /> : null}
@@ -71,7 +89,18 @@ function Deletion({ protocol }: { protocol: ProtocolView }) {
     <View className="gap-3 border-t border-line pt-4">
       {remove.isError ? <ProblemNotice title="The protocol was not deleted" {...wordsOf(remove.error)} /> : null}
       {asked ? <Body>The draft is gone then for everybody. Save it as JSON first if in doubt.</Body> : null}
-      {asked ? <Button kind="danger" icon="remove" label="Delete for good" busy={remove.isPending} onPress={() => remove.mutate({ params: { protocolId: protocol.id } })} testID="delete-protocol-confirm" /> : <Button kind="quiet" label="Delete the protocol" className="self-start" onPress={() => setAsked(true)} testID="delete-protocol" />}
+      {asked ? (
+        <Button
+          kind="danger"
+          icon="remove"
+          label="Delete for good"
+          busy={remove.isPending}
+          onPress={() => remove.mutate({ params: { protocolId: protocol.id } })}
+          testID="delete-protocol-confirm"
+        />
+      ) : (
+        <Button kind="quiet" label="Delete the protocol" className="self-start" onPress={() => setAsked(true)} testID="delete-protocol" />
+      )}
     </View>
   );
 }

@@ -29,11 +29,33 @@ export function NewProtocolScreen() {
       {mayWrite.ok ? null : <Body tone="dim">{mayWrite.why}</Body>}
       {create.isError ? <ProblemNotice title="The protocol was not made" {...wordsOf(create.error)} /> : null}
       <Panel className="flex-row flex-wrap gap-3">
-        <Button icon="plus" label="From nothing" disabled={!mayWrite.ok || create.isPending} onPress={() => begin({ ...emptyDocument('New protocol'), steps: [{ kind: 'home' }] })} testID="from-nothing" />
-        <Button icon="import" label="From a file or text" disabled={!mayWrite.ok || create.isPending} onPress={() => setImporting(true)} testID="from-file" />
+        <Button
+          icon="plus"
+          label="From nothing"
+          disabled={!mayWrite.ok || create.isPending}
+          onPress={() => begin({ ...emptyDocument('New protocol'), steps: [{ kind: 'home' }] })}
+          testID="from-nothing"
+        />
+        <Button
+          icon="import"
+          label="From a file or text"
+          disabled={!mayWrite.ok || create.isPending}
+          onPress={() => setImporting(true)}
+          testID="from-file"
+        />
       </Panel>
       <Section title="Templates" remark={rig === null ? undefined : `Drawn for ${rig.name}: lengths follow the period of its pendulum.`}>
-        {planned === null ? null : templates.map((template) => <TemplateCard key={template.id} template={template} rig={planned} disabled={!mayWrite.ok || create.isPending} onPress={() => begin(template.make(planned))} />)}
+        {planned === null
+          ? null
+          : templates.map((template) => (
+              <TemplateCard
+                key={template.id}
+                template={template}
+                rig={planned}
+                disabled={!mayWrite.ok || create.isPending}
+                onPress={() => begin(template.make(planned))}
+              />
+            ))}
       </Section>
       {importing ? <ImportSheet onDocument={begin} onClose={() => setImporting(false)} /> : null}
     </Screen>
@@ -62,7 +84,14 @@ function TemplateCard({ template, rig, disabled, onPress }: TemplateCardProps) {
   const [document] = useState(() => template.make(rig));
   const [{ timeline }] = useState(() => makeMiniature({ document, rig, timeZone, startUtcMs: 0 }));
   return (
-    <Pressable role="button" aria-label={`Begin with ${template.name}. ${template.summary}`} disabled={disabled} onPress={onPress} testID={`template-${template.id}`} className={`gap-3 rounded-panel border border-panel bg-panel p-4 hover:border-line ${disabled ? 'opacity-50' : ''}`}>
+    <Pressable
+      role="button"
+      aria-label={`Begin with ${template.name}. ${template.summary}`}
+      disabled={disabled}
+      onPress={onPress}
+      testID={`template-${template.id}`}
+      className={`gap-3 rounded-panel border border-panel bg-panel p-4 hover:border-line ${disabled ? 'opacity-50' : ''}`}
+    >
       <View className="flex-row items-baseline justify-between gap-3">
         <Heading level={3} size={17} className="shrink">
           {template.name}

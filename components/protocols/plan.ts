@@ -62,11 +62,22 @@ function spansOf(items: readonly TimelineItem[]): Map<string, StepSpan> {
   for (const item of items) {
     const known = spans.get(item.documentPath);
     if (known !== undefined) known.count += 1;
-    else spans.set(item.documentPath, { durationS: (item.endUtcMs - item.startUtcMs) / 1000, count: 1, station: item.station, firstKey: item.path });
+    else
+      spans.set(item.documentPath, {
+        durationS: (item.endUtcMs - item.startUtcMs) / 1000,
+        count: 1,
+        station: item.station,
+        firstKey: item.path,
+      });
     for (const repeat of repeatsAround(item.documentPath)) {
       const begin = begins.get(repeat) ?? item.startUtcMs;
       begins.set(repeat, begin);
-      spans.set(repeat, { durationS: (item.endUtcMs - begin) / 1000, count: 1, station: item.station, firstKey: spans.get(repeat)?.firstKey ?? item.path });
+      spans.set(repeat, {
+        durationS: (item.endUtcMs - begin) / 1000,
+        count: 1,
+        station: item.station,
+        firstKey: spans.get(repeat)?.firstKey ?? item.path,
+      });
     }
   }
   return spans;

@@ -26,16 +26,66 @@ export function ProtocolDetails({ planning, startAt, onStartAt }: ProtocolDetail
   const stations = Object.keys(rig?.document.stations ?? {});
   const atEnd = document.atEnd?.station;
   const drivers = document.atEnd?.drivers;
-  const setAtEnd = (station: string) => changeDocument({ atEnd: station === stays ? (drivers === undefined ? undefined : { drivers }) : { station, ...(drivers === undefined ? {} : { drivers }) } });
+  const setAtEnd = (station: string) =>
+    changeDocument({
+      atEnd:
+        station === stays ? (drivers === undefined ? undefined : { drivers }) : { station, ...(drivers === undefined ? {} : { drivers }) },
+    });
   return (
     <View className="gap-5" testID="protocol-details">
       <NameField />
-      <Field label="Notes" value={document.notes ?? ''} onChange={(notes) => changeDocument({ notes }, 'notes')} lines={3} disabled={!mayWrite} />
-      <Select label="After an interruption" value={document.onInterruption ?? 'hold'} options={policies} onChange={(onInterruption) => changeDocument({ onInterruption })} hint="A lost link, a server restart, a lost database. A controller reset, an interlock or a lost supply never resumes by itself." disabled={!mayWrite} testID="on-interruption" />
-      <Select label="When it has finished" value={atEnd ?? stays} options={[{ value: stays, label: 'the sources stay' }, ...[...new Set([...stations, ...(atEnd === undefined ? [] : [atEnd])])].map((name) => ({ value: name, label: `the sources turn to ${name}` }))]} onChange={setAtEnd} hint="After a stop, a failure or in a hold nothing moves." disabled={!mayWrite} testID="at-end" />
+      <Field
+        label="Notes"
+        value={document.notes ?? ''}
+        onChange={(notes) => changeDocument({ notes }, 'notes')}
+        lines={3}
+        disabled={!mayWrite}
+      />
+      <Select
+        label="After an interruption"
+        value={document.onInterruption ?? 'hold'}
+        options={policies}
+        onChange={(onInterruption) => changeDocument({ onInterruption })}
+        hint="A lost link, a server restart, a lost database. A controller reset, an interlock or a lost supply never resumes by itself."
+        disabled={!mayWrite}
+        testID="on-interruption"
+      />
+      <Select
+        label="When it has finished"
+        value={atEnd ?? stays}
+        options={[
+          { value: stays, label: 'the sources stay' },
+          ...[...new Set([...stations, ...(atEnd === undefined ? [] : [atEnd])])].map((name) => ({
+            value: name,
+            label: `the sources turn to ${name}`,
+          })),
+        ]}
+        onChange={setAtEnd}
+        hint="After a stop, a failure or in a hold nothing moves."
+        disabled={!mayWrite}
+        testID="at-end"
+      />
       <View className="gap-5 border-t border-line pt-5">
-        {planning.rigs.length === 0 ? <Label>No rig in this lab yet: nothing can be predicted.</Label> : <Select label="Planned on" value={rig?.id ?? ''} options={planning.rigs.map(({ id, name }) => ({ value: id, label: name }))} onChange={planning.choose} hint="Only for the prediction here; the document does not name a rig." testID="planning-rig" />}
-        <Field label="If started at" type="time" value={startAt} onChange={onStartAt} hint={`Lab time, ${zoneName(timeZone)}. Empty: now.`} testID="start-at" />
+        {planning.rigs.length === 0 ? (
+          <Label>No rig in this lab yet: nothing can be predicted.</Label>
+        ) : (
+          <Select
+            label="Planned on"
+            value={rig?.id ?? ''}
+            options={planning.rigs.map(({ id, name }) => ({ value: id, label: name }))}
+            onChange={planning.choose}
+            hint="Only for the prediction here; the document does not name a rig."
+            testID="planning-rig"
+          />
+        )}
+        <Field
+          label="If started at"
+          type="time"
+          value={startAt}
+          onChange={onStartAt}
+          hint={`Lab time, ${zoneName(timeZone)}. Empty: now.`}
+          testID="start-at"
+        />
       </View>
     </View>
   );
@@ -49,5 +99,15 @@ function NameField() {
     setEmptied(name.trim() === '');
     if (name.trim() !== '') changeDocument({ name: name.slice(0, 120) }, 'name');
   };
-  return <Field label="Name" value={emptied ? '' : document.name} onChange={change} onBlur={() => setEmptied(false)} error={emptied ? 'the protocol needs a name; the last one is kept' : undefined} disabled={!mayWrite} testID="protocol-name" />;
+  return (
+    <Field
+      label="Name"
+      value={emptied ? '' : document.name}
+      onChange={change}
+      onBlur={() => setEmptied(false)}
+      error={emptied ? 'the protocol needs a name; the last one is kept' : undefined}
+      disabled={!mayWrite}
+      testID="protocol-name"
+    />
+  );
 }

@@ -16,12 +16,26 @@ export function ProtocolsScreen() {
   const items = protocols.data?.data.items ?? [];
   const begin = () => router.push('/protocols/new');
   return (
-    <Screen title="Protocols" testID="protocols-screen" trailing={mayWrite ? <Button kind="quiet" icon="plus" label="New protocol" onPress={begin} testID="new-protocol" /> : undefined}>
+    <Screen
+      title="Protocols"
+      testID="protocols-screen"
+      trailing={mayWrite ? <Button kind="quiet" icon="plus" label="New protocol" onPress={begin} testID="new-protocol" /> : undefined}
+    >
       <MayNote act="protocol.write" />
       {protocols.isPending ? <Loading label="Loading the protocols" /> : null}
-      {protocols.isError && items.length === 0 ? <ProblemNotice title="The protocols could not be read" {...wordsOf(protocols.error)} action={{ label: 'Try again', onPress: () => void protocols.refetch() }} /> : null}
+      {protocols.isError && items.length === 0 ? (
+        <ProblemNotice
+          title="The protocols could not be read"
+          {...wordsOf(protocols.error)}
+          action={{ label: 'Try again', onPress: () => void protocols.refetch() }}
+        />
+      ) : null}
       {protocols.isSuccess && items.length === 0 ? (
-        <Empty title="No protocol yet" icon="protocols" action={mayWrite ? { label: 'New protocol', icon: 'plus', onPress: begin } : undefined}>
+        <Empty
+          title="No protocol yet"
+          icon="protocols"
+          action={mayWrite ? { label: 'New protocol', icon: 'plus', onPress: begin } : undefined}
+        >
           A protocol says which way the masses stand, when and for how long. Begin with a template and change it.
         </Empty>
       ) : null}

@@ -24,7 +24,11 @@ export function RehearseSheet({ protocolId, sync, onClose }: { protocolId: strin
     setBusy(true);
     setProblem(null);
     try {
-      if ((await sync.flush()) === null) return setProblem({ detail: 'The draft is not saved yet, and only a saved draft can be rehearsed. See why under the title.', errors: [] });
+      if ((await sync.flush()) === null)
+        return setProblem({
+          detail: 'The draft is not saved yet, and only a saved draft can be rehearsed. See why under the title.',
+          errors: [],
+        });
       const { data } = await send({ body: { rigId: rig?.id ?? '', protocolId, seed: number } });
       router.push(`/runs/${data.id}` as Href);
     } catch (error) {
@@ -34,12 +38,44 @@ export function RehearseSheet({ protocolId, sync, onClose }: { protocolId: strin
     }
   };
   return (
-    <Sheet open title="Rehearse" onClose={onClose} testID="rehearse-sheet" footer={<Button kind="primary" size="action" icon="start" label="Rehearse" disabled={rig === null || seedWrong || findings.length > 0} busy={busy} onPress={() => void start()} testID="rehearse-confirm" />}>
+    <Sheet
+      open
+      title="Rehearse"
+      onClose={onClose}
+      testID="rehearse-sheet"
+      footer={
+        <Button
+          kind="primary"
+          size="action"
+          icon="start"
+          label="Rehearse"
+          disabled={rig === null || seedWrong || findings.length > 0}
+          busy={busy}
+          onPress={() => void start()}
+          testID="rehearse-confirm"
+        />
+      }
+    >
       <Body>
-        The draft runs on a simulated {rig?.name ?? 'rig'}, {plan === null ? 'all of it' : `all ${formatDuration(plan.timeline.durationS)} of it`} in seconds: the same engine, link protocol and log, a pendulum with noise and drift. Nothing real moves.
+        The draft runs on a simulated {rig?.name ?? 'rig'},{' '}
+        {plan === null ? 'all of it' : `all ${formatDuration(plan.timeline.durationS)} of it`} in seconds: the same engine, link protocol
+        and log, a pendulum with noise and drift. Nothing real moves.
       </Body>
-      {findings.length === 0 ? null : <ProblemNotice title="It cannot be rehearsed as it is" detail="The same things stand against it as against issuing." errors={findings.map(({ path, message }) => ({ path: path ?? '', message }))} />}
-      <Field label="Seed" value={seed} onChange={setSeed} mono hint="The same seed gives the same night, noise included." error={seedWrong ? `a whole number from 1 to ${greatestSeed}` : undefined} />
+      {findings.length === 0 ? null : (
+        <ProblemNotice
+          title="It cannot be rehearsed as it is"
+          detail="The same things stand against it as against issuing."
+          errors={findings.map(({ path, message }) => ({ path: path ?? '', message }))}
+        />
+      )}
+      <Field
+        label="Seed"
+        value={seed}
+        onChange={setSeed}
+        mono
+        hint="The same seed gives the same night, noise included."
+        error={seedWrong ? `a whole number from 1 to ${greatestSeed}` : undefined}
+      />
       <Label>The result shows the G that comes back beside the G that the simulated pendulum obeys.</Label>
       {problem === null ? null : <ProblemNotice title="The rehearsal did not begin" {...problem} />}
     </Sheet>

@@ -26,8 +26,24 @@ export function RevisionCard({ protocol, revision }: { protocol: ProtocolView; r
         </View>
         <View className="h-11">{document === undefined || rig === null ? null : <Miniature document={document} rig={rig.document} />}</View>
         <View className="flex-row flex-wrap gap-2">
-          <Button icon="export" label="JSON" accessibilityLabel={`Save revision ${revision.number} as JSON`} disabled={document === undefined} onPress={() => (document === undefined ? undefined : saveTextFile(`${fileNameOf(document.name)}-rev-${revision.number}.protocol.json`, exportProtocolText(document)))} />
-          {rig === null || !mayStart ? null : <Button icon="start" label={`Start on ${rig.name}`} onPress={() => router.push(`/rigs/${rig.id}/start?protocol=${protocol.id}&revision=${revision.number}` as Href)} />}
+          <Button
+            icon="export"
+            label="JSON"
+            accessibilityLabel={`Save revision ${revision.number} as JSON`}
+            disabled={document === undefined}
+            onPress={() =>
+              document === undefined
+                ? undefined
+                : saveTextFile(`${fileNameOf(document.name)}-rev-${revision.number}.protocol.json`, exportProtocolText(document))
+            }
+          />
+          {rig === null || !mayStart ? null : (
+            <Button
+              icon="start"
+              label={`Start on ${rig.name}`}
+              onPress={() => router.push(`/rigs/${rig.id}/start?protocol=${protocol.id}&revision=${revision.number}` as Href)}
+            />
+          )}
         </View>
       </Panel>
     </Section>

@@ -17,12 +17,21 @@ export function ProtocolRevisionsScreen() {
   if (protocol === undefined) {
     return (
       <Screen title="Revisions" back={back}>
-        {query.isError ? <ProblemNotice title="The protocol could not be read" {...wordsOf(query.error)} /> : <Loading label="Loading the revisions" />}
+        {query.isError ? (
+          <ProblemNotice title="The protocol could not be read" {...wordsOf(query.error)} />
+        ) : (
+          <Loading label="Loading the revisions" />
+        )}
       </Screen>
     );
   }
   return (
-    <Screen title={`Revisions of ${protocol.name}`} back={back} testID="protocol-revisions" aside={protocol.revisions.length === 0 ? undefined : <Comparison protocol={protocol} />}>
+    <Screen
+      title={`Revisions of ${protocol.name}`}
+      back={back}
+      testID="protocol-revisions"
+      aside={protocol.revisions.length === 0 ? undefined : <Comparison protocol={protocol} />}
+    >
       {protocol.revisions.length === 0 ? (
         <Empty title="Nothing issued yet" icon="document">
           Issuing the draft makes revision 1, which never changes and can be run.
@@ -43,7 +52,10 @@ function useSide(protocol: ProtocolView, side: string): ProtocolDocument | null 
 }
 
 function Comparison({ protocol }: { protocol: ProtocolView }) {
-  const options = [{ value: draft, label: 'Draft' }, ...protocol.revisions.map(({ number }) => ({ value: String(number), label: `Revision ${number}` }))];
+  const options = [
+    { value: draft, label: 'Draft' },
+    ...protocol.revisions.map(({ number }) => ({ value: String(number), label: `Revision ${number}` })),
+  ];
   const [from, setFrom] = useState(String(protocol.revisions[1]?.number ?? protocol.revisions[0]?.number ?? draft));
   const [to, setTo] = useState(protocol.draftDiffers ? draft : String(protocol.revisions[0]?.number ?? draft));
   const before = useSide(protocol, from);
@@ -58,7 +70,9 @@ function Comparison({ protocol }: { protocol: ProtocolView }) {
           <Select label="To" value={to} options={options} onChange={setTo} testID="compare-to" />
         </View>
       </View>
-      <Panel className="py-2">{before === null || after === null ? <Loading label="Reading both" /> : <DifferencesList before={before} after={after} />}</Panel>
+      <Panel className="py-2">
+        {before === null || after === null ? <Loading label="Reading both" /> : <DifferencesList before={before} after={after} />}
+      </Panel>
     </Section>
   );
 }

@@ -28,7 +28,12 @@ export type SaveEvent =
 
 export const beginSave = (etag: string, document: ProtocolDocument): SaveState => ({ status: 'saved', etag, saved: document, detail: '' });
 
-const base = (etag: string, document: ProtocolDocument, present: ProtocolDocument): SaveState => ({ status: present === document ? 'saved' : 'unsaved', etag, saved: document, detail: '' });
+const base = (etag: string, document: ProtocolDocument, present: ProtocolDocument): SaveState => ({
+  status: present === document ? 'saved' : 'unsaved',
+  etag,
+  saved: document,
+  detail: '',
+});
 
 /** The way of a draft to the server, pure. A conflict is left only by a person's decision. */
 export function saveReducer(state: SaveState, event: SaveEvent): SaveState {
@@ -44,6 +49,8 @@ export function saveReducer(state: SaveState, event: SaveEvent): SaveState {
     case 'failed':
       return { ...state, status: event.status, detail: event.detail };
     case 'try-again':
-      return state.status === 'unreachable' || state.status === 'signed-out' || state.status === 'refused' ? { ...state, status: 'unsaved' } : state;
+      return state.status === 'unreachable' || state.status === 'signed-out' || state.status === 'refused'
+        ? { ...state, status: 'unsaved' }
+        : state;
   }
 }

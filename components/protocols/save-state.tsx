@@ -31,7 +31,11 @@ export function SaveTrouble({ sync }: { sync: DraftSync }) {
     <Panel edge={status === 'refused' ? 'danger' : 'lamp'} testID="save-trouble">
       <View role="status" aria-live="polite" className="gap-2">
         <Body strong>{status === 'refused' ? 'The draft is not saved as it is' : 'The draft is not on the server yet'}</Body>
-        <Body>{status === 'refused' ? `${detail} Your edits are kept on this device and sent when this is put right.` : 'Your edits are kept on this device and sent by themselves when the server answers.'}</Body>
+        <Body>
+          {status === 'refused'
+            ? `${detail} Your edits are kept on this device and sent when this is put right.`
+            : 'Your edits are kept on this device and sent by themselves when the server answers.'}
+        </Body>
       </View>
       {status === 'refused' ? <Button label="Try again" className="mt-3 self-start" onPress={sync.tryAgain} /> : null}
     </Panel>

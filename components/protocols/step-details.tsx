@@ -26,7 +26,13 @@ export function StepDetails({ path }: { path: StepPath }) {
           <Body>{message}</Body>
         </Panel>
       ))}
-      <StepForm key={`${path.join('.')} ${step.kind}`} step={step} rig={editor.rig?.document ?? null} disabled={!editor.mayWrite} onChange={(next) => editor.replace(path, next)} />
+      <StepForm
+        key={`${path.join('.')} ${step.kind}`}
+        step={step}
+        rig={editor.rig?.document ?? null}
+        disabled={!editor.mayWrite}
+        onChange={(next) => editor.replace(path, next)}
+      />
       {span === undefined ? null : (
         <Label>
           Takes {formatDuration(span.durationS)} by plan{span.count > 1 ? `, ${span.count} times` : ''}.
@@ -44,7 +50,11 @@ function Structure({ path, repeat }: { path: StepPath; repeat: boolean }) {
     <View className="flex-row flex-wrap gap-2 border-t border-line pt-4">
       <Button icon="up" label="Up" accessibilityLabel="Move up" onPress={editor.moveUp} />
       <Button icon="down" label="Down" accessibilityLabel="Move down" onPress={editor.moveDown} />
-      {repeat ? <Button icon="unnest" label="Take steps out" onPress={editor.unnest} /> : <Button icon="nest" label="Into a repeat" onPress={editor.nest} />}
+      {repeat ? (
+        <Button icon="unnest" label="Take steps out" onPress={editor.unnest} />
+      ) : (
+        <Button icon="nest" label="Into a repeat" onPress={editor.nest} />
+      )}
       {!repeat && path.length > 1 ? <Button icon="unnest" label="Out of the repeat" onPress={editor.unnest} /> : null}
       <Button icon="duplicate" label="Duplicate" onPress={editor.duplicate} />
     </View>

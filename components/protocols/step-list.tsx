@@ -34,7 +34,9 @@ function useListKeys(): (event: Key) => void {
     Escape: () => editor.select(null),
     ...(mayWrite ? { Delete: editor.remove, Backspace: editor.remove } : {}),
   };
-  const withAlt: Record<string, () => void> = mayWrite ? { ArrowUp: editor.moveUp, ArrowDown: editor.moveDown, ArrowRight: editor.nest, ArrowLeft: editor.unnest } : {};
+  const withAlt: Record<string, () => void> = mayWrite
+    ? { ArrowUp: editor.moveUp, ArrowDown: editor.moveDown, ArrowRight: editor.nest, ArrowLeft: editor.unnest }
+    : {};
   return (event) => {
     if (event.ctrlKey || event.metaKey) return;
     const act = (event.altKey ? withAlt : plain)[event.key];

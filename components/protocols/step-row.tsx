@@ -55,7 +55,11 @@ export function StepRow({ step, path, documentPath, tabStop }: StepRowProps) {
           {title}
           {station === '' ? '' : <Body tone="dim">{station}</Body>}
         </Body>
-        {under === '' ? null : <Num size={13} tone="dim">{under}</Num>}
+        {under === '' ? null : (
+          <Num size={13} tone="dim">
+            {under}
+          </Num>
+        )}
       </View>
       {mark === '' ? null : <Icon name={wrong ? 'warning' : 'note'} tone={wrong ? 'danger' : 'lamp'} size={18} />}
       {chosen ? <Label tone="lamp">Details</Label> : <Icon name="forward" size={16} tone="faint" />}

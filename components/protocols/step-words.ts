@@ -72,7 +72,10 @@ export function stepTitle(step: Step): string {
   }
 }
 
-const times = (count: number, unit: string) => `${formatSignificant(count, 3).replace(/(\.\d*?)0+$/, '$1').replace(/\.$/, '')} ${unit}`;
+const times = (count: number, unit: string) =>
+  `${formatSignificant(count, 3)
+    .replace(/(\.\d*?)0+$/, '$1')
+    .replace(/\.$/, '')} ${unit}`;
 
 function lengthWords(step: Step): string {
   switch (step.kind) {
@@ -82,7 +85,9 @@ function lengthWords(step: Step): string {
       if (step.beat_periods !== undefined) return `beat of ${times(step.beat_periods, 'T')}`;
       return step.periods === undefined ? '' : times(step.periods, 'T');
     case 'wait':
-      return 'localTime' in step.until ? { continue: '', hold: 'hold if past', 'next day': 'next day if past' }[step.until.ifPast ?? 'continue'] : '';
+      return 'localTime' in step.until
+        ? { continue: '', hold: 'hold if past', 'next day': 'next day if past' }[step.until.ifPast ?? 'continue']
+        : '';
     case 'repeat':
       return step.steps.length === 0 ? 'nothing in it yet' : '';
     default:

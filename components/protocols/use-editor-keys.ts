@@ -5,7 +5,8 @@ interface History {
   redo: (() => void) | null;
 }
 
-const isTyping = (target: EventTarget | null) => target instanceof HTMLElement && (target.isContentEditable || ['INPUT', 'TEXTAREA', 'SELECT'].includes(target.tagName));
+const isTyping = (target: EventTarget | null) =>
+  target instanceof HTMLElement && (target.isContentEditable || ['INPUT', 'TEXTAREA', 'SELECT'].includes(target.tagName));
 
 /** Ctrl+Z and Ctrl+Shift+Z (or Ctrl+Y; Cmd on a Mac) anywhere on the screen but in a field, which has its own undo. */
 export function useHistoryKeys({ undo, redo }: History): void {

@@ -1,6 +1,17 @@
 import { useMemo, useReducer } from 'react';
 import type { ProtocolDocument, Step } from '@/shared/protocol/document';
-import { changeDocument, duplicateStep, insertStep, moveStepDown, moveStepUp, nestInRepeat, removeStep, replaceStep, unnest, type Edited } from '@/shared/protocol/edit';
+import {
+  changeDocument,
+  duplicateStep,
+  insertStep,
+  moveStepDown,
+  moveStepUp,
+  nestInRepeat,
+  removeStep,
+  replaceStep,
+  unnest,
+  type Edited,
+} from '@/shared/protocol/edit';
 import { canRedo, canUndo } from '@/shared/protocol/history';
 import { stepAt, type StepPath } from '@/shared/protocol/step-path';
 import type { EditorApi } from './editor-context';
@@ -21,8 +32,10 @@ export function useEditorState(begin: ProtocolDocument): EditorActs {
   const document = state.history.present;
   const { selected } = state;
   return useMemo(() => {
-    const change = (edited: Edited, mergeKey?: string) => dispatch({ kind: 'change', edited, ...(mergeKey === undefined ? {} : { mergeKey }) });
-    const onSelected = (operation: (document: ProtocolDocument, path: StepPath) => Edited) => () => (selected === null ? undefined : change(operation(document, selected)));
+    const change = (edited: Edited, mergeKey?: string) =>
+      dispatch({ kind: 'change', edited, ...(mergeKey === undefined ? {} : { mergeKey }) });
+    const onSelected = (operation: (document: ProtocolDocument, path: StepPath) => Edited) => () =>
+      selected === null ? undefined : change(operation(document, selected));
     return {
       document,
       selected,
@@ -38,7 +51,8 @@ export function useEditorState(begin: ProtocolDocument): EditorActs {
       unnest: onSelected(unnest),
       duplicate: onSelected(duplicateStep),
       remove: onSelected(removeStep),
-      changeDocument: (fields, mergeKey) => dispatch({ kind: 'document', document: changeDocument(document, fields), ...(mergeKey === undefined ? {} : { mergeKey }) }),
+      changeDocument: (fields, mergeKey) =>
+        dispatch({ kind: 'document', document: changeDocument(document, fields), ...(mergeKey === undefined ? {} : { mergeKey }) }),
       putDocument: (next) => dispatch({ kind: 'document', document: next }),
     };
   }, [document, selected, state.history]);

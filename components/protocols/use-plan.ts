@@ -30,6 +30,12 @@ interface PlanInput {
 export function usePlan({ document, rig, timeZone, startAt }: PlanInput): Plan | null {
   const minute = useMinute();
   const deferred = useDeferredValue(document);
-  const startUtcMs = useMemo(() => (startAt === '' ? minute : nextOccurrenceUtcMs({ localTime: startAt, timeZone, utcMs: minute })), [minute, startAt, timeZone]);
-  return useMemo(() => (rig === null ? null : makePlan({ document: deferred, rig, timeZone, startUtcMs })), [deferred, rig, timeZone, startUtcMs]);
+  const startUtcMs = useMemo(
+    () => (startAt === '' ? minute : nextOccurrenceUtcMs({ localTime: startAt, timeZone, utcMs: minute })),
+    [minute, startAt, timeZone],
+  );
+  return useMemo(
+    () => (rig === null ? null : makePlan({ document: deferred, rig, timeZone, startUtcMs })),
+    [deferred, rig, timeZone, startUtcMs],
+  );
 }

@@ -28,19 +28,37 @@ export function AddRigSheet({ onClose }: { onClose: () => void }) {
     router.push(`/rigs/${data.id}` as Href);
   });
   const document = from === 'import' ? imported : examples[from].document;
-  const options = [...(Object.keys(examples) as (keyof typeof examples)[]).map((key) => ({ value: key as From, label: examples[key].label })), { value: 'import' as From, label: 'A rig document of yours (JSON)' }];
+  const options = [
+    ...(Object.keys(examples) as (keyof typeof examples)[]).map((key) => ({ value: key as From, label: examples[key].label })),
+    { value: 'import' as From, label: 'A rig document of yours (JSON)' },
+  ];
   return (
     <Sheet
       open
       title="Add a rig"
       onClose={onClose}
-      footer={<Button kind="primary" size="action" label="Add the rig" disabled={name.trim() === '' || document === null} busy={create.isPending} onPress={() => (document === null ? undefined : create.mutate({ body: { name: name.trim(), document, link: { kind: 'simulated' } } }))} />}
+      footer={
+        <Button
+          kind="primary"
+          size="action"
+          label="Add the rig"
+          disabled={name.trim() === '' || document === null}
+          busy={create.isPending}
+          onPress={() =>
+            document === null ? undefined : create.mutate({ body: { name: name.trim(), document, link: { kind: 'simulated' } } })
+          }
+        />
+      }
     >
       <Field label="Name" value={name} onChange={setName} placeholder="North bench" hint="As a sign on the door would have it." />
       <Select label="Begin with" value={from} options={options} onChange={setFrom} />
       {from === 'import' ? (
         <>
-          <Button icon="import" label={imported === null ? 'Read the document' : 'Read another document'} onPress={() => setReading(true)} />
+          <Button
+            icon="import"
+            label={imported === null ? 'Read the document' : 'Read another document'}
+            onPress={() => setReading(true)}
+          />
           <Body tone={imported === null ? 'dim' : 'good'}>{imported === null ? 'No document read yet.' : 'The document is read.'}</Body>
         </>
       ) : (

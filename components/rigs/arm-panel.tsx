@@ -16,12 +16,17 @@ export function ArmPanel({ rig }: { rig: RigView }) {
     <Section title="Arm">
       <Panel className="gap-3" edge={rig.arm === null ? undefined : 'lamp'}>
         {rig.arm === null ? (
-          <Body tone="dim">Not armed. A run starts only on a rig that a named person has armed on site, until after the finish. Hold and stop never need it.</Body>
+          <Body tone="dim">
+            Not armed. A run starts only on a rig that a named person has armed on site, until after the finish. Hold and stop never need
+            it.
+          </Body>
         ) : (
           <Armed arm={rig.arm} />
         )}
         <MayNote act="rig.arm" />
-        {mayArm && rig.arm === null ? <Button icon="key" label="Arm the rig" className="self-start" onPress={() => setArming(true)} testID="arm" /> : null}
+        {mayArm && rig.arm === null ? (
+          <Button icon="key" label="Arm the rig" className="self-start" onPress={() => setArming(true)} testID="arm" />
+        ) : null}
         {mayArm && rig.arm !== null ? <Disarm rig={rig} /> : null}
       </Panel>
       {arming ? <ArmSheet rig={rig} onClose={() => setArming(false)} /> : null}
@@ -51,8 +56,16 @@ function Disarm({ rig }: { rig: RigView }) {
   return (
     <View className="gap-2">
       {end.isError ? <ProblemNotice title="The rig is still armed" {...wordsOf(end.error)} /> : null}
-      <Button label="Disarm" className="self-start" busy={end.isPending} onPress={() => end.mutate({ params: { rigId: rig.id } })} testID="disarm" />
-      {rig.activeRun === null ? null : <Label>The running run goes on; it cannot be resumed after a hold until the rig is armed again.</Label>}
+      <Button
+        label="Disarm"
+        className="self-start"
+        busy={end.isPending}
+        onPress={() => end.mutate({ params: { rigId: rig.id } })}
+        testID="disarm"
+      />
+      {rig.activeRun === null ? null : (
+        <Label>The running run goes on; it cannot be resumed after a hold until the rig is armed again.</Label>
+      )}
     </View>
   );
 }

@@ -27,7 +27,11 @@ export function ArmSheet({ rig, onClose }: { rig: RigView; onClose: () => void }
   const untilMs = serverNowMs() + Number(forHours) * 3_600_000;
   const complete = name.trim() !== '' && onSite && read;
   const errors = fieldErrors(send.error);
-  const submit = () => send.mutate({ params: { rigId: rig.id }, body: { name: name.trim(), until: new Date(untilMs).toISOString(), note: note.trim(), cautionsRead: true } });
+  const submit = () =>
+    send.mutate({
+      params: { rigId: rig.id },
+      body: { name: name.trim(), until: new Date(untilMs).toISOString(), note: note.trim(), cautionsRead: true },
+    });
   return (
     <Sheet
       open
@@ -37,15 +41,36 @@ export function ArmSheet({ rig, onClose }: { rig: RigView; onClose: () => void }
       footer={
         <>
           {complete ? null : <Label>Name, place and cautions must be given first.</Label>}
-          <Button kind="primary" size="action" icon="key" label="Arm" disabled={!complete} busy={send.isPending} onPress={submit} testID="arm-confirm" />
+          <Button
+            kind="primary"
+            size="action"
+            icon="key"
+            label="Arm"
+            disabled={!complete}
+            busy={send.isPending}
+            onPress={submit}
+            testID="arm-confirm"
+          />
         </>
       }
     >
       <Field label="Who answers for the rig on site" value={name} onChange={setName} autoComplete="name" error={errors['name']} />
-      <Select label="For how long" value={forHours} options={hours.map((each) => ({ value: each, label: `${each} h` }))} onChange={setForHours} hint={`Until ${formatClockWithZone(untilMs, { timeZone, weekday: true })}. A run starts only if it is planned to end before.`} error={errors['until']} />
+      <Select
+        label="For how long"
+        value={forHours}
+        options={hours.map((each) => ({ value: each, label: `${each} h` }))}
+        onChange={setForHours}
+        hint={`Until ${formatClockWithZone(untilMs, { timeZone, weekday: true })}. A run starts only if it is planned to end before.`}
+        error={errors['until']}
+      />
       <Field label="Note for whoever starts a run" value={note} onChange={setNote} placeholder="camera glued, do not level" />
       <Cautions />
-      <Check label="I am at the rig, I have looked, and nobody will be in the swept circle." value={onSite} onChange={setOnSite} testID="arm-on-site" />
+      <Check
+        label="I am at the rig, I have looked, and nobody will be in the swept circle."
+        value={onSite}
+        onChange={setOnSite}
+        testID="arm-on-site"
+      />
       <Check label="I have read these cautions and seen to them." value={read} onChange={setRead} testID="arm-cautions" />
       {send.isError ? <ProblemNotice title="The rig was not armed" {...wordsOf(send.error)} /> : null}
     </Sheet>

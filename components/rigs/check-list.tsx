@@ -16,7 +16,11 @@ export function CheckList({ checks }: { checks: readonly StartCheck[] }) {
   return (
     <Panel className="py-1" testID="start-checks">
       {sorted.map((check, index) => (
-        <View key={check.code} className={`flex-row items-start gap-3 py-3 ${index === 0 ? '' : 'border-t border-line'}`} testID={`check-${check.code}`}>
+        <View
+          key={check.code}
+          className={`flex-row items-start gap-3 py-3 ${index === 0 ? '' : 'border-t border-line'}`}
+          testID={`check-${check.code}`}
+        >
           <Icon name={marks[check.state].icon} tone={marks[check.state].tone} label={marks[check.state].said} />
           <View className="flex-1">
             <Body strong>{check.title}</Body>

@@ -21,7 +21,13 @@ export function DocumentList({ document, changed = [], onPress }: DocumentListPr
             {group}
           </Heading>
           {rows.map((row, index) => (
-            <RowLine key={row.path} row={row} first={index === 0} changed={changed.includes(row.path)} onPress={row.kind === 'words' ? undefined : onPress} />
+            <RowLine
+              key={row.path}
+              row={row}
+              first={index === 0}
+              changed={changed.includes(row.path)}
+              onPress={row.kind === 'words' ? undefined : onPress}
+            />
           ))}
         </Panel>
       ))}
@@ -56,7 +62,13 @@ function RowLine({ row, first, changed, onPress }: RowLineProps) {
   );
   if (onPress === undefined) return <View className={line}>{inside}</View>;
   return (
-    <Pressable role="button" aria-label={`${row.group}, ${row.label}: ${quantityLine(row)}. Change`} onPress={() => onPress(row)} className={`${line} -mx-2 rounded-lg px-2 hover:bg-panel2`} testID={`row-${row.path}`}>
+    <Pressable
+      role="button"
+      aria-label={`${row.group}, ${row.label}: ${quantityLine(row)}. Change`}
+      onPress={() => onPress(row)}
+      className={`${line} -mx-2 rounded-lg px-2 hover:bg-panel2`}
+      testID={`row-${row.path}`}
+    >
       {inside}
     </Pressable>
   );

@@ -97,7 +97,8 @@ const unitOf = (path: string): string => unitBySuffix.find(([pattern]) => patter
 
 type Value = Record<string, unknown>;
 const isRecord = (value: unknown): value is Value => typeof value === 'object' && value !== null && !Array.isArray(value);
-const isQuantity = (value: Value): value is Value & { value: number; u: number; unit: string } => typeof value['value'] === 'number' && typeof value['u'] === 'number' && typeof value['unit'] === 'string';
+const isQuantity = (value: Value): value is Value & { value: number; u: number; unit: string } =>
+  typeof value['value'] === 'number' && typeof value['u'] === 'number' && typeof value['unit'] === 'string';
 
 function labelOf(path: string): string {
   const known = labels[path];
@@ -110,7 +111,10 @@ function labelOf(path: string): string {
 
 function wordsOf(value: unknown): string {
   if (typeof value === 'boolean') return value ? 'yes' : 'no';
-  if (Array.isArray(value)) return value.length === 0 ? 'none' : value.map((each) => (Array.isArray(each) ? each.map((limit) => `${limit}°`).join(' to ') : String(each))).join(', ');
+  if (Array.isArray(value))
+    return value.length === 0
+      ? 'none'
+      : value.map((each) => (Array.isArray(each) ? each.map((limit) => `${limit}°`).join(' to ') : String(each))).join(', ');
   return String(value);
 }
 
@@ -120,7 +124,14 @@ function* walk(value: unknown, path: string): Generator<DocumentRow> {
   if (isRecord(value)) {
     if (isQuantity(value)) {
       yield { ...head, kind: 'quantity', value: value.value, u: value.u, unit: value.unit };
-      if (typeof value['approach'] === 'string') yield { ...head, path: `${path}.approach`, label: `${head.label}, approached`, kind: 'words', words: value['approach'] === 'ccw' ? 'counter-clockwise' : 'clockwise' };
+      if (typeof value['approach'] === 'string')
+        yield {
+          ...head,
+          path: `${path}.approach`,
+          label: `${head.label}, approached`,
+          kind: 'words',
+          words: value['approach'] === 'ccw' ? 'counter-clockwise' : 'clockwise',
+        };
     } else for (const [name, inner] of Object.entries(value)) yield* walk(inner, path === '' ? name : `${path}.${name}`);
     return;
   }
@@ -128,7 +139,8 @@ function* walk(value: unknown, path: string): Generator<DocumentRow> {
     for (const [index, part] of value.entries()) yield* walk(part, `${path}.${index}`);
     return;
   }
-  if (typeof value === 'number' && !['pendulum.balls', 'sources.count', 'lever.sense'].includes(path)) yield { ...head, kind: 'number', value, unit: unitOf(path) };
+  if (typeof value === 'number' && !['pendulum.balls', 'sources.count', 'lever.sense'].includes(path))
+    yield { ...head, kind: 'number', value, unit: unitOf(path) };
   else yield { ...head, label: path === 'motion.keepOut' ? 'Keep-out arcs' : head.label, kind: 'words', words: wordsOf(value) };
 }
 

@@ -24,13 +24,43 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
   };
   return (
     <View className="gap-4">
-      <Tabs label="Kind of link" value={link.kind} options={[{ value: 'simulated', label: 'Simulated' }, { value: 'serial', label: 'Serial line' }]} onChange={(kind) => (kind === 'simulated' ? onChange({ kind }) : serial({}))} />
+      <Tabs
+        label="Kind of link"
+        value={link.kind}
+        options={[
+          { value: 'simulated', label: 'Simulated' },
+          { value: 'serial', label: 'Serial line' },
+        ]}
+        onChange={(kind) => (kind === 'simulated' ? onChange({ kind }) : serial({}))}
+      />
       {link.kind === 'simulated' ? (
-        <Label>A controller inside the server, with the same line protocol and limits, and a pendulum that answers to it. For learning, rehearsing and tests.</Label>
+        <Label>
+          A controller inside the server, with the same line protocol and limits, and a pendulum that answers to it. For learning,
+          rehearsing and tests.
+        </Label>
       ) : (
         <>
-          <Field label="Path of the line" value={path} onChange={(next) => serial({ path: next })} mono placeholder="/dev/pts/4" hint="As the server sees it. In this version a pseudo-terminal; real ports come with the controller's own acceptance." error={errors['path']} testID="link-path" />
-          <Field label="Speed" value={baud} onChange={(next) => serial({ baud: next })} type="number" unit="baud" error={errors['baudRate'] ?? (Number.isInteger(baudRate) && baudRate >= 300 && baudRate <= 1_000_000 ? undefined : 'a whole number from 300 to 1 000 000')} />
+          <Field
+            label="Path of the line"
+            value={path}
+            onChange={(next) => serial({ path: next })}
+            mono
+            placeholder="/dev/pts/4"
+            hint="As the server sees it. In this version a pseudo-terminal; real ports come with the controller's own acceptance."
+            error={errors['path']}
+            testID="link-path"
+          />
+          <Field
+            label="Speed"
+            value={baud}
+            onChange={(next) => serial({ baud: next })}
+            type="number"
+            unit="baud"
+            error={
+              errors['baudRate'] ??
+              (Number.isInteger(baudRate) && baudRate >= 300 && baudRate <= 1_000_000 ? undefined : 'a whole number from 300 to 1 000 000')
+            }
+          />
         </>
       )}
     </View>

@@ -26,7 +26,14 @@ export function LinkPanel({ rig }: { rig: RigView }) {
           </View>
         </View>
         <MayNote act="rig.edit" />
-        {mayEdit ? <Button label="Change or try the link" className="self-start" onPress={() => router.push(`/rigs/${rig.id}/link` as Href)} testID="change-link" /> : null}
+        {mayEdit ? (
+          <Button
+            label="Change or try the link"
+            className="self-start"
+            onPress={() => router.push(`/rigs/${rig.id}/link` as Href)}
+            testID="change-link"
+          />
+        ) : null}
       </Panel>
     </Section>
   );

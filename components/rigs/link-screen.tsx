@@ -16,7 +16,11 @@ export function LinkScreen() {
   if (rig === undefined) {
     return (
       <Screen title="Link" back={back}>
-        {query.isError ? <ProblemNotice title="The rig could not be read" {...wordsOf(query.error)} /> : <Loading label="Loading the rig" />}
+        {query.isError ? (
+          <ProblemNotice title="The rig could not be read" {...wordsOf(query.error)} />
+        ) : (
+          <Loading label="Loading the rig" />
+        )}
       </Screen>
     );
   }
@@ -55,9 +59,26 @@ function LinkChoice({ rig }: { rig: RigView }) {
         errors={fieldErrors(problem)}
       />
       {attempt.data === undefined ? null : <TryResult {...attempt.data.data} />}
-      {problem === null ? null : <ProblemNotice title={attempt.isError ? 'The link could not be tried' : 'The link was not changed'} {...wordsOf(problem)} />}
-      <Button icon="link" label="Try: say hello, move nothing" busy={attempt.isPending} disabled={incomplete} onPress={() => attempt.mutate({ params, body: link })} testID="try-link" />
-      <Button kind="primary" size="action" label="Use this link" busy={save.isPending} disabled={incomplete} onPress={() => save.mutate({ params, body: link })} testID="save-link" />
+      {problem === null ? null : (
+        <ProblemNotice title={attempt.isError ? 'The link could not be tried' : 'The link was not changed'} {...wordsOf(problem)} />
+      )}
+      <Button
+        icon="link"
+        label="Try: say hello, move nothing"
+        busy={attempt.isPending}
+        disabled={incomplete}
+        onPress={() => attempt.mutate({ params, body: link })}
+        testID="try-link"
+      />
+      <Button
+        kind="primary"
+        size="action"
+        label="Use this link"
+        busy={save.isPending}
+        disabled={incomplete}
+        onPress={() => save.mutate({ params, body: link })}
+        testID="save-link"
+      />
     </>
   );
 }

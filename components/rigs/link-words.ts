@@ -8,7 +8,8 @@ export interface LinkState {
   tone: Tone;
 }
 
-const ageS = (live: RigLive): number | null => (live.lastReplyAt === null ? null : Math.max(0, (serverNowMs() - Date.parse(live.lastReplyAt)) / 1000));
+const ageS = (live: RigLive): number | null =>
+  live.lastReplyAt === null ? null : Math.max(0, (serverNowMs() - Date.parse(live.lastReplyAt)) / 1000);
 
 /** The link in two words for a chip; the age is that of the controller's last valid reply. */
 export function linkState(live: RigLive): LinkState {
@@ -27,4 +28,5 @@ export function linkState(live: RigLive): LinkState {
   }
 }
 
-export const linkName = (link: LinkSettings): string => (link.kind === 'simulated' ? 'Simulated controller' : `${link.path}, ${link.baudRate} baud`);
+export const linkName = (link: LinkSettings): string =>
+  link.kind === 'simulated' ? 'Simulated controller' : `${link.path}, ${link.baudRate} baud`;

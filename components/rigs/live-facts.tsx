@@ -15,7 +15,11 @@ const factsOf = (live: RigLive): Fact[] => [
   { label: 'Drivers', ...yesNo(live.driversOn, { yes: 'on', no: 'off' }) },
 ];
 
-const marks = { good: { icon: 'passed', tone: 'good' }, bad: { icon: 'warning', tone: 'danger' }, unknown: { icon: 'other', tone: 'dim' } } as const;
+const marks = {
+  good: { icon: 'passed', tone: 'good' },
+  bad: { icon: 'warning', tone: 'danger' },
+  unknown: { icon: 'other', tone: 'dim' },
+} as const;
 
 /** What the controller itself says: angle, whether it moves, and what motion depends on. */
 export function LiveFacts({ live }: { live: RigLive }) {

@@ -12,7 +12,21 @@ export function MassSets({ rig }: { rig: RigView }) {
   const mayEdit = useMay('rig.edit').ok;
   const [adding, setAdding] = useState(false);
   return (
-    <Section title="Mass sets" trailing={mayEdit ? <Button kind="quiet" icon="plus" label="Add" accessibilityLabel="Add a mass set" onPress={() => setAdding(true)} testID="add-mass-set" /> : undefined}>
+    <Section
+      title="Mass sets"
+      trailing={
+        mayEdit ? (
+          <Button
+            kind="quiet"
+            icon="plus"
+            label="Add"
+            accessibilityLabel="Add a mass set"
+            onPress={() => setAdding(true)}
+            testID="add-mass-set"
+          />
+        ) : undefined
+      }
+    >
       <Panel className="py-1">
         {rig.massSets.length === 0 ? <Label className="py-3">No mass set yet. A run needs one, an empty control included.</Label> : null}
         {rig.massSets.map((set, index) => (
@@ -30,8 +44,11 @@ export function MassSets({ rig }: { rig: RigView }) {
 /** The sources of a mass set on one line. */
 export function sourcesLine(sources: MassSetView['sources']): string {
   if (sources.shape === 'none') return 'empty control: no sources';
-  const row = (label: string, quantity: { value: number; u: number; unit: string } | undefined) => (quantity === undefined ? null : `${label} ${quantityLine({ path: '', group: '', label: '', kind: 'quantity', ...quantity })}`);
-  return [`2 ${sources.shape}s`, row('mass', sources.mass), row('radius', sources.radius), row('orbit', sources.orbit)].filter(Boolean).join(', ');
+  const row = (label: string, quantity: { value: number; u: number; unit: string } | undefined) =>
+    quantity === undefined ? null : `${label} ${quantityLine({ path: '', group: '', label: '', kind: 'quantity', ...quantity })}`;
+  return [`2 ${sources.shape}s`, row('mass', sources.mass), row('radius', sources.radius), row('orbit', sources.orbit)]
+    .filter(Boolean)
+    .join(', ');
 }
 
 type Kind = 'like' | 'none';
@@ -51,13 +68,40 @@ function MassSetSheet({ rig, onClose }: { rig: RigView; onClose: () => void }) {
     onClose();
   });
   const submit = () => {
-    const sources: MassSetView['sources'] = kind === 'none' ? { shape: 'none', ...(base.extra === undefined ? {} : { extra: base.extra }) } : { ...base, mass: { value: numbers.value ?? 0, u: numbers.u ?? 0, unit: 'kg' } };
+    const sources: MassSetView['sources'] =
+      kind === 'none'
+        ? { shape: 'none', ...(base.extra === undefined ? {} : { extra: base.extra }) }
+        : { ...base, mass: { value: numbers.value ?? 0, u: numbers.u ?? 0, unit: 'kg' } };
     add.mutate({ params: { rigId: rig.id }, body: { label: label.trim(), sources } });
   };
   return (
-    <Sheet open title="Add a mass set" onClose={onClose} footer={<Button kind="primary" size="action" label="Add the mass set" disabled={label.trim() === '' || wrong} busy={add.isPending} onPress={submit} />}>
+    <Sheet
+      open
+      title="Add a mass set"
+      onClose={onClose}
+      footer={
+        <Button
+          kind="primary"
+          size="action"
+          label="Add the mass set"
+          disabled={label.trim() === '' || wrong}
+          busy={add.isPending}
+          onPress={submit}
+        />
+      }
+    >
       <Field label="Name" value={label} onChange={setLabel} placeholder="Tungsten spheres, 1.6 kg" />
-      {base.shape === 'none' ? null : <Tabs label="What sits on the turntable" value={kind} options={[{ value: 'like', label: `${base.shape === 'sphere' ? 'Spheres' : 'Cylinders'}` }, { value: 'none', label: 'Nothing: empty control' }]} onChange={setKind} />}
+      {base.shape === 'none' ? null : (
+        <Tabs
+          label="What sits on the turntable"
+          value={kind}
+          options={[
+            { value: 'like', label: `${base.shape === 'sphere' ? 'Spheres' : 'Cylinders'}` },
+            { value: 'none', label: 'Nothing: empty control' },
+          ]}
+          onChange={setKind}
+        />
+      )}
       {kind === 'none' ? (
         <Label>The same timing without sources: what is left is what turns along and what disturbs.</Label>
       ) : (

@@ -37,7 +37,12 @@ export function quantityWords(row: DocumentRow): QuantityWords {
   return { value: formatFixed(row.value * factor, { decimals }), u: `±${NARROW_SPACE}${formatFixed(u * factor, { decimals })}`, unit };
 }
 
-const plain = (value: number) => (Number.isInteger(value) ? formatFixed(value, { decimals: 0 }) : formatSignificant(value, 6).replace(/(\.\d*?)[0\u202f]+$/, '$1').replace(/\.$/, ''));
+const plain = (value: number) =>
+  Number.isInteger(value)
+    ? formatFixed(value, { decimals: 0 })
+    : formatSignificant(value, 6)
+        .replace(/(\.\d*?)[0\u202f]+$/, '$1')
+        .replace(/\.$/, '');
 
 /** The same on one line: `75.000 ± 0.050 mm`. */
 export function quantityLine(row: DocumentRow | null): string {

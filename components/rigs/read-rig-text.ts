@@ -17,5 +17,8 @@ export function readRigText(text: string): { document: RigDocument; problems: []
 export function readRigDocument(value: unknown): { document: RigDocument; problems: [] } | { document: null; problems: TextProblem[] } {
   const read = rigDocumentSchema.safeParse(value);
   if (read.success) return { document: read.data, problems: [] };
-  return { document: null, problems: read.error.issues.map((issue) => ({ path: issue.path.map(String).join('.'), message: issue.message })) };
+  return {
+    document: null,
+    problems: read.error.issues.map((issue) => ({ path: issue.path.map(String).join('.'), message: issue.message })),
+  };
 }

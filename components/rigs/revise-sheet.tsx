@@ -28,13 +28,42 @@ export function ReviseSheet({ rig, etag, draft, onClose }: ReviseSheetProps) {
     onClose();
   });
   const overtaken = isProblem(save.error, 'edited-meanwhile');
-  const submit = () => save.mutate({ params: { rigId: rig.id }, ifMatch: etag, body: { name: name.trim(), document: draft.document, reason: reason.trim() } });
+  const submit = () =>
+    save.mutate({ params: { rigId: rig.id }, ifMatch: etag, body: { name: name.trim(), document: draft.document, reason: reason.trim() } });
   return (
-    <Sheet open title={`Make revision ${rig.revision + 1}`} onClose={onClose} footer={<Button kind="primary" size="action" label="Make the revision" disabled={reason.trim() === '' || name.trim() === ''} busy={save.isPending} onPress={submit} testID="revise" />}>
+    <Sheet
+      open
+      title={`Make revision ${rig.revision + 1}`}
+      onClose={onClose}
+      footer={
+        <Button
+          kind="primary"
+          size="action"
+          label="Make the revision"
+          disabled={reason.trim() === '' || name.trim() === ''}
+          busy={save.isPending}
+          onPress={submit}
+          testID="revise"
+        />
+      }
+    >
       <ChangeList changes={draft.changes} />
       <Field label="Name of the rig" value={name} onChange={setName} />
-      <Field label="Reason" value={reason} onChange={setReason} lines={2} hint="What was measured or changed, with what. It stays with the revision for ever." testID="revise-reason" />
-      {save.isError ? <ProblemNotice title={overtaken ? 'Somebody made a revision meanwhile' : 'No revision was made'} {...wordsOf(save.error)} {...(overtaken ? { action: { label: 'Read the newest and keep my changes', onPress: () => (refresh(), save.reset()) } } : {})} /> : null}
+      <Field
+        label="Reason"
+        value={reason}
+        onChange={setReason}
+        lines={2}
+        hint="What was measured or changed, with what. It stays with the revision for ever."
+        testID="revise-reason"
+      />
+      {save.isError ? (
+        <ProblemNotice
+          title={overtaken ? 'Somebody made a revision meanwhile' : 'No revision was made'}
+          {...wordsOf(save.error)}
+          {...(overtaken ? { action: { label: 'Read the newest and keep my changes', onPress: () => (refresh(), save.reset()) } } : {})}
+        />
+      ) : null}
     </Sheet>
   );
 }

@@ -12,7 +12,12 @@ export function RigCard({ rig }: { rig: RigSummary }) {
   const { timeZone } = useLab();
   const link = linkState(rig.live);
   return (
-    <Link href={`/rigs/${rig.id}` as Href} testID={`rig-${rig.id}`} className="rounded-panel border border-panel bg-panel p-4 hover:border-line wide:w-[calc(50%-8px)]" style={{ display: 'flex', flexDirection: 'column', gap: 12 }}>
+    <Link
+      href={`/rigs/${rig.id}` as Href}
+      testID={`rig-${rig.id}`}
+      className="rounded-panel border border-panel bg-panel p-4 hover:border-line wide:w-[calc(50%-8px)]"
+      style={{ display: 'flex', flexDirection: 'column', gap: 12 }}
+    >
       <View className="w-full flex-row flex-wrap items-center justify-between gap-2">
         <Heading level={2} size={20}>
           {rig.name}
@@ -34,8 +39,19 @@ export function RigCard({ rig }: { rig: RigSummary }) {
         </View>
       </View>
       <View className="w-full gap-1.5 border-t border-line pt-3">
-        <Line icon="key" words={rig.arm === null ? 'Not armed' : `Armed by ${rig.arm.name} until ${formatClockWithZone(Date.parse(rig.arm.until), { timeZone, weekday: true })}`} />
-        <Line icon={rig.activeRun === null ? 'clear' : 'start'} words={rig.activeRun === null ? 'Nothing is running' : `${rig.activeRun.protocolName}, ${rig.activeRun.state}`} lit={rig.activeRun !== null} />
+        <Line
+          icon="key"
+          words={
+            rig.arm === null
+              ? 'Not armed'
+              : `Armed by ${rig.arm.name} until ${formatClockWithZone(Date.parse(rig.arm.until), { timeZone, weekday: true })}`
+          }
+        />
+        <Line
+          icon={rig.activeRun === null ? 'clear' : 'start'}
+          words={rig.activeRun === null ? 'Nothing is running' : `${rig.activeRun.protocolName}, ${rig.activeRun.state}`}
+          lit={rig.activeRun !== null}
+        />
       </View>
     </Link>
   );

@@ -25,17 +25,40 @@ export function RigDocumentSection({ rig, etag }: { rig: RigView; etag: string |
     <Section title={`Apparatus, revision ${rig.revision}`}>
       <View className="flex-row flex-wrap gap-2">
         <Button label="Revisions" onPress={() => router.push(`/rigs/${rig.id}/revisions` as Href)} testID="rig-revisions" />
-        <Button icon="export" label="JSON" accessibilityLabel="Save the rig document as JSON" onPress={() => saveTextFile(`${fileNameOf(rig.name)}-rev-${rig.revision}.rig.json`, `${JSON.stringify(rig.document, null, 2)}\n`)} testID="rig-export" />
-        {mayEdit ? <Button icon="import" label="Import" accessibilityLabel="Import a rig document" onPress={() => setSheet({ kind: 'import' })} testID="rig-import" /> : null}
+        <Button
+          icon="export"
+          label="JSON"
+          accessibilityLabel="Save the rig document as JSON"
+          onPress={() => saveTextFile(`${fileNameOf(rig.name)}-rev-${rig.revision}.rig.json`, `${JSON.stringify(rig.document, null, 2)}\n`)}
+          testID="rig-export"
+        />
+        {mayEdit ? (
+          <Button
+            icon="import"
+            label="Import"
+            accessibilityLabel="Import a rig document"
+            onPress={() => setSheet({ kind: 'import' })}
+            testID="rig-import"
+          />
+        ) : null}
       </View>
       <MayNote act="rig.edit" />
       {draft.changes.length === 0 ? null : (
         <View className="gap-2">
-          <Button kind="primary" label={`Review ${draft.changes.length} ${draft.changes.length === 1 ? 'change' : 'changes'}`} onPress={() => setSheet({ kind: 'revise' })} testID="rig-review" />
+          <Button
+            kind="primary"
+            label={`Review ${draft.changes.length} ${draft.changes.length === 1 ? 'change' : 'changes'}`}
+            onPress={() => setSheet({ kind: 'revise' })}
+            testID="rig-review"
+          />
           <Button kind="quiet" label="Discard the changes" onPress={draft.discard} />
         </View>
       )}
-      <DocumentList document={draft.document} changed={draft.changes.map((change) => change.path)} onPress={mayEdit ? (row) => setSheet({ kind: 'quantity', row }) : undefined} />
+      <DocumentList
+        document={draft.document}
+        changed={draft.changes.map((change) => change.path)}
+        onPress={mayEdit ? (row) => setSheet({ kind: 'quantity', row }) : undefined}
+      />
       {sheet?.kind === 'quantity' ? <QuantitySheet row={sheet.row} draft={draft} onClose={close} /> : null}
       {sheet?.kind === 'import' ? <RigImportSheet onDocument={draft.set} onClose={close} /> : null}
       {sheet?.kind === 'revise' ? <ReviseSheet rig={rig} etag={etag} draft={draft} onClose={close} /> : null}

@@ -21,7 +21,13 @@ export function RigRevisionsScreen() {
   return (
     <Screen title={`Revisions of ${rig?.name ?? 'the rig'}`} back={{ href: `/rigs/${rigId}` as Href, label: rig?.name ?? 'the rig' }}>
       {revisions.isPending ? <Loading label="Loading the revisions" /> : null}
-      {revisions.isError ? <ProblemNotice title="The revisions could not be read" {...wordsOf(revisions.error)} action={{ label: 'Try again', onPress: () => void revisions.refetch() }} /> : null}
+      {revisions.isError ? (
+        <ProblemNotice
+          title="The revisions could not be read"
+          {...wordsOf(revisions.error)}
+          action={{ label: 'Try again', onPress: () => void revisions.refetch() }}
+        />
+      ) : null}
       {items.map((revision, index) => (
         <RevisionPanel key={revision.number} revision={revision} before={items[index + 1] ?? null} name={rig?.name ?? 'rig'} />
       ))}
@@ -43,8 +49,22 @@ function RevisionPanel({ revision, before, name }: { revision: Revision; before:
           </Label>
         </View>
         <View className="flex-row flex-wrap gap-2">
-          {before === null ? null : <Button expanded={open} icon="compare" label={open ? 'Hide the changes' : `${changes.length} ${changes.length === 1 ? 'change' : 'changes'}`} onPress={() => setOpen(!open)} />}
-          <Button icon="export" label="JSON" accessibilityLabel={`Save revision ${revision.number} as JSON`} onPress={() => saveTextFile(`${fileNameOf(name)}-rev-${revision.number}.rig.json`, `${JSON.stringify(revision.document, null, 2)}\n`)} />
+          {before === null ? null : (
+            <Button
+              expanded={open}
+              icon="compare"
+              label={open ? 'Hide the changes' : `${changes.length} ${changes.length === 1 ? 'change' : 'changes'}`}
+              onPress={() => setOpen(!open)}
+            />
+          )}
+          <Button
+            icon="export"
+            label="JSON"
+            accessibilityLabel={`Save revision ${revision.number} as JSON`}
+            onPress={() =>
+              saveTextFile(`${fileNameOf(name)}-rev-${revision.number}.rig.json`, `${JSON.stringify(revision.document, null, 2)}\n`)
+            }
+          />
         </View>
         {open ? <ChangeList changes={changes} /> : null}
       </Panel>

@@ -22,7 +22,15 @@ export function RigScreen() {
   if (rig === undefined) {
     return (
       <Screen title="Rig" back={{ href: '/rigs', label: 'rigs' }}>
-        {query.isError ? <ProblemNotice title="The rig could not be read" {...wordsOf(query.error)} action={{ label: 'Try again', onPress: () => void query.refetch() }} /> : <Loading label="Loading the rig" />}
+        {query.isError ? (
+          <ProblemNotice
+            title="The rig could not be read"
+            {...wordsOf(query.error)}
+            action={{ label: 'Try again', onPress: () => void query.refetch() }}
+          />
+        ) : (
+          <Loading label="Loading the rig" />
+        )}
       </Screen>
     );
   }
@@ -74,8 +82,19 @@ function StartButton({ rig }: { rig: RigView }) {
   const busy = rig.activeRun !== null;
   return (
     <View className="gap-2">
-      {hint && busy ? <Body role="status">{rig.name} is running {rig.activeRun?.protocolName}. One run at a time: wait until it ends, or stop it.</Body> : null}
-      <Button kind={busy ? 'plain' : 'primary'} size="action" icon="start" label="Start a run" testID="start-a-run" onPress={() => (busy ? setHint(true) : router.push(`/rigs/${rig.id}/start` as Href))} />
+      {hint && busy ? (
+        <Body role="status">
+          {rig.name} is running {rig.activeRun?.protocolName}. One run at a time: wait until it ends, or stop it.
+        </Body>
+      ) : null}
+      <Button
+        kind={busy ? 'plain' : 'primary'}
+        size="action"
+        icon="start"
+        label="Start a run"
+        testID="start-a-run"
+        onPress={() => (busy ? setHint(true) : router.push(`/rigs/${rig.id}/start` as Href))}
+      />
     </View>
   );
 }

@@ -14,11 +14,25 @@ export function RigsScreen() {
   const [adding, setAdding] = useState(false);
   const items = rigs.data?.data.items ?? [];
   return (
-    <Screen title="Rigs" testID="rigs-screen" trailing={mayEdit ? <Button kind="quiet" icon="plus" label="Add a rig" onPress={() => setAdding(true)} /> : undefined}>
+    <Screen
+      title="Rigs"
+      testID="rigs-screen"
+      trailing={mayEdit ? <Button kind="quiet" icon="plus" label="Add a rig" onPress={() => setAdding(true)} /> : undefined}
+    >
       {rigs.isPending ? <Loading label="Loading the rigs" /> : null}
-      {rigs.isError && items.length === 0 ? <ProblemNotice title="The rigs could not be read" {...wordsOf(rigs.error)} action={{ label: 'Try again', onPress: () => void rigs.refetch() }} /> : null}
+      {rigs.isError && items.length === 0 ? (
+        <ProblemNotice
+          title="The rigs could not be read"
+          {...wordsOf(rigs.error)}
+          action={{ label: 'Try again', onPress: () => void rigs.refetch() }}
+        />
+      ) : null}
       {rigs.isSuccess && items.length === 0 ? (
-        <Empty title="No rig yet" icon="rig" action={mayEdit ? { label: 'Add a rig', icon: 'plus', onPress: () => setAdding(true) } : undefined}>
+        <Empty
+          title="No rig yet"
+          icon="rig"
+          action={mayEdit ? { label: 'Add a rig', icon: 'plus', onPress: () => setAdding(true) } : undefined}
+        >
           A rig is one turntable with its pendulum. It is added from a rig document, or from one of two examples to start with.
         </Empty>
       ) : null}

@@ -7,7 +7,12 @@ import type { RigView } from '@/shared/contracts/rigs';
 export function RunningNow({ rig }: { rig: RigView }) {
   if (rig.activeRun === null) return null;
   return (
-    <Link href={`/runs/${rig.activeRun.id}` as Href} testID="running-now" className="min-h-action rounded-panel border-2 border-lamp bg-panel px-4 py-3" style={{ display: 'flex', alignItems: 'center', gap: 12 }}>
+    <Link
+      href={`/runs/${rig.activeRun.id}` as Href}
+      testID="running-now"
+      className="min-h-action rounded-panel border-2 border-lamp bg-panel px-4 py-3"
+      style={{ display: 'flex', alignItems: 'center', gap: 12 }}
+    >
       <Icon name="start" tone="lamp" />
       <View className="flex-1">
         <Body strong>{rig.activeRun.protocolName}</Body>

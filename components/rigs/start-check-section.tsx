@@ -21,8 +21,20 @@ export function StartCheckSection({ rig, choice }: { rig: RigView; choice: Start
   };
   return (
     <Section title="Start checks">
-      {data !== undefined ? <CheckList checks={data.checks} /> : checks.isError ? <ProblemNotice title="The start checks could not be made" {...wordsOf(checks.error)} action={{ label: 'Try again', onPress: () => void checks.refetch() }} /> : <Loading label="Making the start checks" />}
-      {rig.arm === null ? <Button icon="key" label="Arm the rig" className="self-start" onPress={() => setArming(true)} testID="arm-here" /> : null}
+      {data !== undefined ? (
+        <CheckList checks={data.checks} />
+      ) : checks.isError ? (
+        <ProblemNotice
+          title="The start checks could not be made"
+          {...wordsOf(checks.error)}
+          action={{ label: 'Try again', onPress: () => void checks.refetch() }}
+        />
+      ) : (
+        <Loading label="Making the start checks" />
+      )}
+      {rig.arm === null ? (
+        <Button icon="key" label="Arm the rig" className="self-start" onPress={() => setArming(true)} testID="arm-here" />
+      ) : null}
       {arming ? <ArmSheet rig={rig} onClose={close} /> : null}
     </Section>
   );

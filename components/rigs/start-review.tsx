@@ -98,8 +98,22 @@ function StartAct({ rig, choice, mayStart, stale }: StartActProps) {
   return (
     <View className="gap-3">
       {start.isError ? <ProblemNotice title="The run was not started" {...wordsOf(start.error)} /> : null}
-      {ready ? null : <Body tone="dim">{stale ? 'The checks are old: the server does not answer. Nothing can be started until it does.' : 'Something above stands against a start. It may be started when every check passes.'}</Body>}
-      <PressAndKeep label="Start the run" icon="start" statement="I have read the review; the rig may move." onConfirm={send} disabled={!ready} busy={start.isPending} testID="start-run" />
+      {ready ? null : (
+        <Body tone="dim">
+          {stale
+            ? 'The checks are old: the server does not answer. Nothing can be started until it does.'
+            : 'Something above stands against a start. It may be started when every check passes.'}
+        </Body>
+      )}
+      <PressAndKeep
+        label="Start the run"
+        icon="start"
+        statement="I have read the review; the rig may move."
+        onConfirm={send}
+        disabled={!ready}
+        busy={start.isPending}
+        testID="start-run"
+      />
       <Label>Stop in this application is no emergency stop: the hard-wired one is at the rig.</Label>
     </View>
   );

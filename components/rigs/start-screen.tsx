@@ -23,7 +23,15 @@ export function StartScreen() {
   if (rig === undefined || issued === undefined || !mayStart.ok || issued.length === 0) {
     return (
       <Screen title={title} back={back}>
-        {!mayStart.ok ? <Body tone="dim">{mayStart.why}</Body> : failure !== null ? <ProblemNotice title="This could not be read" {...wordsOf(failure)} /> : issued?.length === 0 ? <NothingIssued /> : <Loading label="Loading rig and protocols" />}
+        {!mayStart.ok ? (
+          <Body tone="dim">{mayStart.why}</Body>
+        ) : failure !== null ? (
+          <ProblemNotice title="This could not be read" {...wordsOf(failure)} />
+        ) : issued?.length === 0 ? (
+          <NothingIssued />
+        ) : (
+          <Loading label="Loading rig and protocols" />
+        )}
       </Screen>
     );
   }
@@ -55,7 +63,10 @@ function StartForm({ rig, issued, title, back }: StartFormProps) {
   const protocol = issued.find(({ id }) => id === protocolId);
   const revisions = useLabQuery(getProtocol, { params: { protocolId } }).data?.data.revisions ?? [];
   const revision = revisions.find(({ number }) => String(number) === chosenRevision)?.number ?? protocol?.latestRevision ?? 1;
-  const options = revisions.length === 0 ? [{ value: String(revision), label: `Revision ${revision}` }] : revisions.map(({ number, note }) => ({ value: String(number), label: `Revision ${number}${note === '' ? '' : `: ${note}`}` }));
+  const options =
+    revisions.length === 0
+      ? [{ value: String(revision), label: `Revision ${revision}` }]
+      : revisions.map(({ number, note }) => ({ value: String(number), label: `Revision ${number}${note === '' ? '' : `: ${note}`}` }));
   const choice = { protocolId, protocolName: protocol?.name ?? '', revision, massSetId, notes };
   const choose = (id: string) => {
     setProtocolId(id);
@@ -66,10 +77,24 @@ function StartForm({ rig, issued, title, back }: StartFormProps) {
       <Section title="What to run">
         <Panel className="gap-4">
           <View className="gap-4 wide:flex-row wide:*:flex-1">
-            <Select label="Protocol" value={protocolId} options={issued.map(({ id, name }) => ({ value: id, label: name }))} onChange={choose} testID="start-protocol" />
+            <Select
+              label="Protocol"
+              value={protocolId}
+              options={issued.map(({ id, name }) => ({ value: id, label: name }))}
+              onChange={choose}
+              testID="start-protocol"
+            />
             <Select label="Revision" value={String(revision)} options={options} onChange={setChosenRevision} testID="start-revision" />
           </View>
-          <Select label="Mass set on the turntable" value={massSetId} options={rig.massSets.map(({ id, label }) => ({ value: id, label }))} onChange={setMassSetId} hint="What really sits there now; one run has one mass set." testID="start-mass-set" error={rig.massSets.length === 0 ? 'the rig has no mass set yet; a keeper adds one on the rig page' : undefined} />
+          <Select
+            label="Mass set on the turntable"
+            value={massSetId}
+            options={rig.massSets.map(({ id, label }) => ({ value: id, label }))}
+            onChange={setMassSetId}
+            hint="What really sits there now; one run has one mass set."
+            testID="start-mass-set"
+            error={rig.massSets.length === 0 ? 'the rig has no mass set yet; a keeper adds one on the rig page' : undefined}
+          />
           <Field label="Notes for the log" value={notes} onChange={setNotes} lines={2} />
         </Panel>
       </Section>

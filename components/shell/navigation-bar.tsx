@@ -13,7 +13,11 @@ const places: readonly { href: Href; label: string; icon: IconName }[] = [
 export function NavigationBar() {
   const pathname = usePathname();
   return (
-    <View role="navigation" aria-label="Places" className="flex-none flex-row border-t border-line bg-ink pb-[env(safe-area-inset-bottom)] wide:w-[104px] wide:flex-col wide:gap-1 wide:border-r wide:border-t-0 wide:px-2 wide:py-4">
+    <View
+      role="navigation"
+      aria-label="Places"
+      className="flex-none flex-row border-t border-line bg-ink pb-[env(safe-area-inset-bottom)] wide:w-[104px] wide:flex-col wide:gap-1 wide:border-r wide:border-t-0 wide:px-2 wide:py-4"
+    >
       <View className="hidden items-center pb-4 wide:flex" aria-hidden>
         <Body size={20} tone="lamp" className="font-mono">
           ef
@@ -28,7 +32,12 @@ export function NavigationBar() {
 
 function Place({ href, label, icon, here }: { href: Href; label: string; icon: IconName; here: boolean }) {
   return (
-    <Link href={href} aria-current={here ? 'page' : undefined} className={`min-h-[58px] flex-1 items-center justify-center gap-1 rounded-xl py-2 hover:bg-panel wide:min-h-[60px] wide:flex-none ${here ? 'wide:bg-panel' : ''}`} style={{ display: 'flex', flexDirection: 'column' }}>
+    <Link
+      href={href}
+      aria-current={here ? 'page' : undefined}
+      className={`min-h-[58px] flex-1 items-center justify-center gap-1 rounded-xl py-2 hover:bg-panel wide:min-h-[60px] wide:flex-none ${here ? 'wide:bg-panel' : ''}`}
+      style={{ display: 'flex', flexDirection: 'column' }}
+    >
       <Icon name={icon} size={22} tone={here ? 'lamp' : 'dim'} />
       <Body size={13} tone={here ? 'lamp' : 'dim'} strong={here}>
         {label}

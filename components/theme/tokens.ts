@@ -3,7 +3,21 @@
 export const themeNames = ['dark', 'light', 'red'] as const;
 export type ThemeName = (typeof themeNames)[number];
 
-export const tokenNames = ['ink', 'panel', 'panel2', 'line', 'text', 'dim', 'faint', 'lamp', 'onLamp', 'near', 'far', 'danger', 'good'] as const;
+export const tokenNames = [
+  'ink',
+  'panel',
+  'panel2',
+  'line',
+  'text',
+  'dim',
+  'faint',
+  'lamp',
+  'onLamp',
+  'near',
+  'far',
+  'danger',
+  'good',
+] as const;
 export type ThemeColors = Record<(typeof tokenNames)[number], string>;
 
 /** `faint` is for marks and lines, never for words: it has 3:1 only. `danger` is tuned to 7:1 on ink and panel for Stop. */

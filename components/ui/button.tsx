@@ -38,7 +38,19 @@ export interface ButtonProps {
 }
 
 /** A button with words. At least 48 px high, 64 px as `action`. */
-export function Button({ label, onPress, kind = 'plain', size = 'target', icon, disabled = false, busy = false, accessibilityLabel, testID, className = '', expanded }: ButtonProps) {
+export function Button({
+  label,
+  onPress,
+  kind = 'plain',
+  size = 'target',
+  icon,
+  disabled = false,
+  busy = false,
+  accessibilityLabel,
+  testID,
+  className = '',
+  expanded,
+}: ButtonProps) {
   const { colors } = useTheme();
   const off = disabled || busy;
   const height = size === 'action' ? 'min-h-action px-5' : 'min-h-target px-4';
@@ -53,7 +65,11 @@ export function Button({ label, onPress, kind = 'plain', size = 'target', icon, 
       testID={testID}
       className={`flex-row items-center justify-center gap-2 rounded-action active:opacity-80 ${height} ${grounds[kind]} ${off ? 'opacity-50' : ''} ${className}`}
     >
-      {busy ? <ActivityIndicator size="small" color={colors[words[kind].icon]} /> : icon === undefined ? null : <Icon name={icon} size={size === 'action' ? 24 : 20} tone={words[kind].icon} />}
+      {busy ? (
+        <ActivityIndicator size="small" color={colors[words[kind].icon]} />
+      ) : icon === undefined ? null : (
+        <Icon name={icon} size={size === 'action' ? 24 : 20} tone={words[kind].icon} />
+      )}
       <Text className={`font-sans text-center ${size === 'action' ? 'text-17' : 'text-15'} font-strong ${words[kind].text}`}>{label}</Text>
     </Pressable>
   );
@@ -73,7 +89,17 @@ export interface IconButtonProps {
 }
 
 /** A square button with an icon only: 48 × 48 px, its name for screen readers and as a tip. */
-export function IconButton({ icon, label, onPress, disabled = false, pressed, tone = 'text', testID, className = '', children }: IconButtonProps) {
+export function IconButton({
+  icon,
+  label,
+  onPress,
+  disabled = false,
+  pressed,
+  tone = 'text',
+  testID,
+  className = '',
+  children,
+}: IconButtonProps) {
   return (
     <Pressable
       role="button"

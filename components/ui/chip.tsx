@@ -11,7 +11,16 @@ interface ChipProps {
   testID?: string;
 }
 
-const dots: Record<Tone, string> = { text: 'bg-text', dim: 'bg-faint', lamp: 'bg-lamp', near: 'bg-near', far: 'bg-far', danger: 'bg-danger', good: 'bg-good', 'on-lamp': 'bg-on-lamp' };
+const dots: Record<Tone, string> = {
+  text: 'bg-text',
+  dim: 'bg-faint',
+  lamp: 'bg-lamp',
+  near: 'bg-near',
+  far: 'bg-far',
+  danger: 'bg-danger',
+  good: 'bg-good',
+  'on-lamp': 'bg-on-lamp',
+};
 
 /** A small outlined word: a state, a revision. Not a button. */
 export function Chip({ children, tone = 'dim', dot, mono = false, testID }: ChipProps) {

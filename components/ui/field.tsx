@@ -33,7 +33,8 @@ export function FieldFrame({ id, label, hint, error, children }: AroundProps) {
   );
 }
 
-const describedBy = (id: string, hint: unknown, error: unknown) => [hint === undefined ? '' : `${id}-hint`, error === undefined ? '' : `${id}-error`].filter(Boolean).join(' ') || undefined;
+const describedBy = (id: string, hint: unknown, error: unknown) =>
+  [hint === undefined ? '' : `${id}-hint`, error === undefined ? '' : `${id}-error`].filter(Boolean).join(' ') || undefined;
 
 export interface FieldProps {
   label: string;
@@ -56,10 +57,31 @@ export interface FieldProps {
 }
 
 /** A labelled input of 48 px; several lines when `lines` is given. Numbers are typed as text so that both decimal signs work. */
-export function Field({ label, value, onChange, hint, error, type = 'text', mono = false, lines, unit, autoComplete, placeholder, disabled, onEnter, onBlur, inputRef, testID }: FieldProps) {
+export function Field({
+  label,
+  value,
+  onChange,
+  hint,
+  error,
+  type = 'text',
+  mono = false,
+  lines,
+  unit,
+  autoComplete,
+  placeholder,
+  disabled,
+  onEnter,
+  onBlur,
+  inputRef,
+  testID,
+}: FieldProps) {
   const id = useId();
   const shared = {
-    id, value, disabled, placeholder, onBlur,
+    id,
+    value,
+    disabled,
+    placeholder,
+    onBlur,
     'data-testid': testID,
     'aria-invalid': error === undefined ? undefined : true,
     'aria-describedby': describedBy(id, hint, error),
@@ -111,7 +133,16 @@ export function Select<V extends string>({ label, value, options, onChange, hint
   return (
     <FieldFrame id={id} label={label} hint={hint} error={error}>
       <View className="relative">
-        <select id={id} data-testid={testID} className="ef-field pr-10" value={value} disabled={disabled} aria-describedby={describedBy(id, hint, error)} aria-invalid={error === undefined ? undefined : true} onChange={(event) => choose(event.target.value)}>
+        <select
+          id={id}
+          data-testid={testID}
+          className="ef-field pr-10"
+          value={value}
+          disabled={disabled}
+          aria-describedby={describedBy(id, hint, error)}
+          aria-invalid={error === undefined ? undefined : true}
+          onChange={(event) => choose(event.target.value)}
+        >
           {options.map((option) => (
             <option key={option.value} value={option.value}>
               {option.label}

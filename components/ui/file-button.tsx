@@ -17,7 +17,16 @@ export function FileButton({ accept, onText, ...button }: FileButtonProps) {
   };
   return (
     <View>
-      <input ref={input} type="file" accept={accept} hidden aria-hidden tabIndex={-1} data-testid={button.testID === undefined ? undefined : `${button.testID}-input`} onChange={(event) => void read(event.target.files?.[0])} />
+      <input
+        ref={input}
+        type="file"
+        accept={accept}
+        hidden
+        aria-hidden
+        tabIndex={-1}
+        data-testid={button.testID === undefined ? undefined : `${button.testID}-input`}
+        onChange={(event) => void read(event.target.files?.[0])}
+      />
       <Button {...button} onPress={() => input.current?.click()} />
     </View>
   );

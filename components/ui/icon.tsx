@@ -20,10 +20,18 @@ export function Icon({ name, size = 20, tone = 'text', label }: IconProps) {
   const accessible = label === undefined ? ({ 'aria-hidden': true } as const) : ({ role: 'img', 'aria-label': label } as const);
   return (
     <Svg width={size} height={size} viewBox="0 0 24 24" fill="none" {...accessible}>
-      {shape.lines?.map((d) => <Path key={d} d={d} stroke={color} strokeWidth={1.8} strokeLinecap="round" strokeLinejoin="round" />)}
-      {shape.fills?.map((d) => <Path key={d} d={d} fill={color} />)}
-      {shape.dots?.map(([x, y, r]) => <Circle key={`${x} ${y}`} cx={x} cy={y} r={r} fill={color} />)}
-      {shape.rings?.map(([x, y, r]) => <Circle key={`${x} ${y}`} cx={x} cy={y} r={r} stroke={color} strokeWidth={1.8} />)}
+      {shape.lines?.map((d) => (
+        <Path key={d} d={d} stroke={color} strokeWidth={1.8} strokeLinecap="round" strokeLinejoin="round" />
+      ))}
+      {shape.fills?.map((d) => (
+        <Path key={d} d={d} fill={color} />
+      ))}
+      {shape.dots?.map(([x, y, r]) => (
+        <Circle key={`${x} ${y}`} cx={x} cy={y} r={r} fill={color} />
+      ))}
+      {shape.rings?.map(([x, y, r]) => (
+        <Circle key={`${x} ${y}`} cx={x} cy={y} r={r} stroke={color} strokeWidth={1.8} />
+      ))}
     </Svg>
   );
 }

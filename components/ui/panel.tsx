@@ -10,7 +10,13 @@ interface PanelProps {
   testID?: string;
 }
 
-const edges = { lamp: 'border-l-4 border-lamp', danger: 'border-l-4 border-danger', far: 'border-l-4 border-far', near: 'border-l-4 border-near', good: 'border-l-4 border-good' };
+const edges = {
+  lamp: 'border-l-4 border-lamp',
+  danger: 'border-l-4 border-danger',
+  far: 'border-l-4 border-far',
+  near: 'border-l-4 border-near',
+  good: 'border-l-4 border-good',
+};
 
 /** Holds what belongs together. Panels do not stand in panels. */
 export function Panel({ children, edge, className = '', testID }: PanelProps) {
@@ -53,5 +59,7 @@ interface RowProps {
 
 /** One row of a list with a hairline under it. */
 export function Row({ children, className = '', last = false }: RowProps) {
-  return <View className={`min-h-target flex-row items-center gap-3 py-2 ${last ? '' : 'border-b border-line'} ${className}`}>{children}</View>;
+  return (
+    <View className={`min-h-target flex-row items-center gap-3 py-2 ${last ? '' : 'border-b border-line'} ${className}`}>{children}</View>
+  );
 }

@@ -27,7 +27,12 @@ export function PressAndKeep(props: PressAndKeepProps) {
   return (
     <View className="gap-1">
       {bySwitch ? <SwitchAndButton {...props} /> : <KeepButton {...props} onKeyboard={() => setBySwitch(true)} />}
-      <Button kind="quiet" label={bySwitch ? 'Press and keep instead' : 'Use a switch and a button instead'} onPress={() => setBySwitch(!bySwitch)} testID={props.testID === undefined ? undefined : `${props.testID}-other-way`} />
+      <Button
+        kind="quiet"
+        label={bySwitch ? 'Press and keep instead' : 'Use a switch and a button instead'}
+        onPress={() => setBySwitch(!bySwitch)}
+        testID={props.testID === undefined ? undefined : `${props.testID}-other-way`}
+      />
     </View>
   );
 }
@@ -36,7 +41,13 @@ function SwitchAndButton({ label, icon, statement, onConfirm, disabled = false, 
   const [ready, setReady] = useState(false);
   return (
     <View className="gap-2">
-      <Switch label={statement} value={ready} onChange={setReady} disabled={disabled} testID={testID === undefined ? undefined : `${testID}-switch`} />
+      <Switch
+        label={statement}
+        value={ready}
+        onChange={setReady}
+        disabled={disabled}
+        testID={testID === undefined ? undefined : `${testID}-switch`}
+      />
       <Button
         kind="primary"
         size="action"
@@ -54,7 +65,15 @@ function SwitchAndButton({ label, icon, statement, onConfirm, disabled = false, 
   );
 }
 
-function KeepButton({ label, icon, onConfirm, onKeyboard, disabled = false, busy = false, testID }: PressAndKeepProps & { onKeyboard: () => void }) {
+function KeepButton({
+  label,
+  icon,
+  onConfirm,
+  onKeyboard,
+  disabled = false,
+  busy = false,
+  testID,
+}: PressAndKeepProps & { onKeyboard: () => void }) {
   const [keeping, setKeeping] = useState(false);
   const [early, setEarly] = useState(false);
   const timer = useRef<ReturnType<typeof setTimeout>>(undefined);
@@ -73,7 +92,10 @@ function KeepButton({ label, icon, onConfirm, onKeyboard, disabled = false, busy
     setKeeping(false);
   };
   const off = disabled || busy;
-  const keys = { onKeyDown: (event: { key: string; preventDefault: () => void }) => (event.key === 'Enter' || event.key === ' ' ? (event.preventDefault(), onKeyboard()) : undefined) };
+  const keys = {
+    onKeyDown: (event: { key: string; preventDefault: () => void }) =>
+      event.key === 'Enter' || event.key === ' ' ? (event.preventDefault(), onKeyboard()) : undefined,
+  };
   return (
     <View className="gap-1">
       <Pressable
@@ -88,7 +110,9 @@ function KeepButton({ label, icon, onConfirm, onKeyboard, disabled = false, busy
         className={`min-h-action select-none overflow-hidden rounded-action border-2 border-lamp bg-panel2 ${off ? 'opacity-50' : ''}`}
         style={{ touchAction: 'none' } as object}
       >
-        {keeping ? <View className="ef-fill absolute inset-0 bg-lamp opacity-30" style={{ animationDuration: `${keepMs}ms` } as object} /> : null}
+        {keeping ? (
+          <View className="ef-fill absolute inset-0 bg-lamp opacity-30" style={{ animationDuration: `${keepMs}ms` } as object} />
+        ) : null}
         <View className="min-h-action flex-row items-center justify-center gap-2 px-5">
           {icon === undefined ? null : <Icon name={icon} size={24} tone="lamp" />}
           <Body size={17} strong tone={keeping ? 'text' : 'lamp'}>

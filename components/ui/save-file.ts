@@ -9,4 +9,8 @@ export function saveTextFile(fileName: string, text: string, type = 'application
 }
 
 /** A name of a thing as a file name: letters, digits and hyphens. */
-export const fileNameOf = (name: string): string => name.toLowerCase().replace(/[^a-z0-9]+/g, '-').replace(/^-|-$/g, '') || 'untitled';
+export const fileNameOf = (name: string): string =>
+  name
+    .toLowerCase()
+    .replace(/[^a-z0-9]+/g, '-')
+    .replace(/^-|-$/g, '') || 'untitled';

@@ -43,7 +43,12 @@ export function Screen({ title, back, trailing, children, footer, aside, asideOn
         )}
       </View>
       {beside ? (
-        <ScrollView role="complementary" aria-label="Details" className="w-[400px] flex-none border-l border-line" contentContainerClassName="gap-4 p-5 pb-8">
+        <ScrollView
+          role="complementary"
+          aria-label="Details"
+          className="w-[400px] flex-none border-l border-line"
+          contentContainerClassName="gap-4 p-5 pb-8"
+        >
           {aside}
         </ScrollView>
       ) : null}
@@ -55,7 +60,12 @@ function TitleBar({ title, back, trailing }: Pick<ScreenProps, 'title' | 'back' 
   return (
     <View className="min-h-target flex-row items-center gap-1">
       {back === undefined ? null : (
-        <Link href={back.href} aria-label={`Back to ${back.label}`} className="-ml-3 h-12 w-12 items-center justify-center rounded-action hover:bg-panel2" style={{ display: 'flex' }}>
+        <Link
+          href={back.href}
+          aria-label={`Back to ${back.label}`}
+          className="-ml-3 h-12 w-12 items-center justify-center rounded-action hover:bg-panel2"
+          style={{ display: 'flex' }}
+        >
           <Icon name="back" />
         </Link>
       )}

@@ -50,7 +50,8 @@ export function Offline({ since }: { since?: string }) {
     <View role="status" aria-live="polite" className="flex-row items-center gap-3 border-b border-line bg-panel2 px-4 py-2">
       <Icon name="offline" tone="lamp" />
       <Body size={13} className="flex-1">
-        No connection to the server{since === undefined ? '' : ` since ${since}`}. What you see may be old; trying again. A run goes on without this page: stop it at the rig if you must.
+        No connection to the server{since === undefined ? '' : ` since ${since}`}. What you see may be old; trying again. A run goes on
+        without this page: stop it at the rig if you must.
       </Body>
     </View>
   );

@@ -23,8 +23,12 @@ export function Switch({ label, value, onChange, hint, disabled = false, testID 
       onPress={() => onChange(!value)}
       className={`min-h-target flex-row items-center gap-4 py-2 ${disabled ? 'opacity-50' : ''}`}
     >
-      <View className={`h-8 w-14 justify-center rounded-full border px-1 ${value ? 'items-end border-lamp bg-lamp' : 'items-start border-faint bg-ink'}`}>
-        <View className={`h-6 w-6 items-center justify-center rounded-full ${value ? 'bg-on-lamp' : 'bg-faint'}`}>{value ? <Icon name="tick" size={16} tone="lamp" /> : null}</View>
+      <View
+        className={`h-8 w-14 justify-center rounded-full border px-1 ${value ? 'items-end border-lamp bg-lamp' : 'items-start border-faint bg-ink'}`}
+      >
+        <View className={`h-6 w-6 items-center justify-center rounded-full ${value ? 'bg-on-lamp' : 'bg-faint'}`}>
+          {value ? <Icon name="tick" size={16} tone="lamp" /> : null}
+        </View>
       </View>
       <View className="flex-1">
         <Body>{label}</Body>
@@ -44,8 +48,17 @@ interface CheckProps {
 /** A statement to be ticked, for example a caution that was read. */
 export function Check({ label, value, onChange, testID }: CheckProps) {
   return (
-    <Pressable role="checkbox" aria-checked={value} aria-label={label} testID={testID} onPress={() => onChange(!value)} className="min-h-target flex-row items-center gap-3 py-2">
-      <View className={`h-7 w-7 items-center justify-center rounded-lg border-2 ${value ? 'border-lamp bg-lamp' : 'border-faint bg-ink'}`}>{value ? <Icon name="tick" size={20} tone="onLamp" /> : null}</View>
+    <Pressable
+      role="checkbox"
+      aria-checked={value}
+      aria-label={label}
+      testID={testID}
+      onPress={() => onChange(!value)}
+      className="min-h-target flex-row items-center gap-3 py-2"
+    >
+      <View className={`h-7 w-7 items-center justify-center rounded-lg border-2 ${value ? 'border-lamp bg-lamp' : 'border-faint bg-ink'}`}>
+        {value ? <Icon name="tick" size={20} tone="onLamp" /> : null}
+      </View>
       <Body className="flex-1">{label}</Body>
     </Pressable>
   );

@@ -16,7 +16,9 @@ export function Tabs<V extends string>({ label, value, options, onChange, testID
     const next = options[(at + by + options.length) % options.length];
     if (next !== undefined) onChange(next.value);
   };
-  const keys = { onKeyDown: (event: { key: string }) => (event.key === 'ArrowRight' ? move(1) : event.key === 'ArrowLeft' ? move(-1) : undefined) };
+  const keys = {
+    onKeyDown: (event: { key: string }) => (event.key === 'ArrowRight' ? move(1) : event.key === 'ArrowLeft' ? move(-1) : undefined),
+  };
   return (
     <View role="radiogroup" aria-label={label} testID={testID} className="flex-row flex-wrap gap-1 rounded-action bg-panel p-1" {...keys}>
       {options.map((option) => {

@@ -69,7 +69,12 @@ export function Num({ tone = 'text', size = 15, strong = false, light = false, a
   return (
     <Text {...rest} className={join('font-mono tabular', sizes[size], tones[tone], weight, className)}>
       {children}
-      {aside === undefined ? null : <Text className={join('font-sans text-dim font-regular', size >= 24 ? 'text-17' : size >= 17 ? 'text-15' : 'text-13')}> {aside}</Text>}
+      {aside === undefined ? null : (
+        <Text className={join('font-sans text-dim font-regular', size >= 24 ? 'text-17' : size >= 17 ? 'text-15' : 'text-13')}>
+          {' '}
+          {aside}
+        </Text>
+      )}
     </Text>
   );
 }

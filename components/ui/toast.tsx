@@ -35,9 +35,17 @@ export function ToastProvider({ children }: { children: ReactNode }) {
   return (
     <ToastContext.Provider value={api}>
       {children}
-      <View role="status" aria-live="polite" className="absolute left-0 right-0 top-3 items-center px-4" style={{ pointerEvents: 'box-none' }}>
+      <View
+        role="status"
+        aria-live="polite"
+        className="absolute left-0 right-0 top-3 items-center px-4"
+        style={{ pointerEvents: 'box-none' }}
+      >
         {message === null ? null : (
-          <View key={message.id} className="ef-rise max-w-[560px] flex-row items-center gap-4 rounded-action border border-line bg-panel2 py-1 pl-4 pr-2">
+          <View
+            key={message.id}
+            className="ef-rise max-w-[560px] flex-row items-center gap-4 rounded-action border border-line bg-panel2 py-1 pl-4 pr-2"
+          >
             <Body className="shrink py-2">{message.text}</Body>
             {undo === undefined ? null : (
               <Button

@@ -9,4 +9,9 @@ function subscribe(changed: () => void) {
 }
 
 /** Whether there is room for two panes: 1024 px or more. */
-export const useWide = (): boolean => useSyncExternalStore(subscribe, () => window.matchMedia?.(query).matches ?? false, () => false);
+export const useWide = (): boolean =>
+  useSyncExternalStore(
+    subscribe,
+    () => window.matchMedia?.(query).matches ?? false,
+    () => false,
+  );

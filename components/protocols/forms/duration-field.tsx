@@ -6,7 +6,8 @@ import { NumberField, positive } from './number-field';
 const units = { s: 1, min: 60, h: 3600 } as const;
 type Unit = keyof typeof units;
 
-const fitting = (seconds: number): Unit => (seconds >= 7200 && seconds % 1800 === 0 ? 'h' : seconds >= 120 && seconds % 30 === 0 ? 'min' : 's');
+const fitting = (seconds: number): Unit =>
+  seconds >= 7200 && seconds % 1800 === 0 ? 'h' : seconds >= 120 && seconds % 30 === 0 ? 'min' : 's';
 /** Seconds of a document have no more than six decimals worth keeping. */
 const rounded = (value: number) => Number(value.toPrecision(12));
 
@@ -24,10 +25,28 @@ export function DurationField({ label, seconds, onChange, disabled, testID }: Du
   return (
     <View className="flex-row items-start gap-3">
       <View className="min-w-0 flex-1">
-        <NumberField key={unit} label={label} value={rounded(seconds / units[unit])} onChange={(value) => (value === undefined ? undefined : onChange(rounded(value * units[unit])))} refuse={positive} disabled={disabled} testID={testID} />
+        <NumberField
+          key={unit}
+          label={label}
+          value={rounded(seconds / units[unit])}
+          onChange={(value) => (value === undefined ? undefined : onChange(rounded(value * units[unit])))}
+          refuse={positive}
+          disabled={disabled}
+          testID={testID}
+        />
       </View>
       <View className="w-[110px]">
-        <Select label="Unit" value={unit} options={[{ value: 's', label: 's' }, { value: 'min', label: 'min' }, { value: 'h', label: 'h' }]} onChange={setUnit} disabled={disabled} />
+        <Select
+          label="Unit"
+          value={unit}
+          options={[
+            { value: 's', label: 's' },
+            { value: 'min', label: 'min' },
+            { value: 'h', label: 'h' },
+          ]}
+          onChange={setUnit}
+          disabled={disabled}
+        />
       </View>
     </View>
   );

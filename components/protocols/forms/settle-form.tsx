@@ -11,13 +11,21 @@ export function SettleForm({ step, onChange, disabled }: StepFormProps<SettleSte
     return (
       <View className="gap-3">
         <Body>This step waits until it is calm, which this version does not do yet.</Body>
-        {disabled ? null : <Button label="Wait 10 min instead" className="self-start" onPress={() => onChange({ kind: 'settle', for_s: 600, ...label })} />}
+        {disabled ? null : (
+          <Button label="Wait 10 min instead" className="self-start" onPress={() => onChange({ kind: 'settle', for_s: 600, ...label })} />
+        )}
       </View>
     );
   }
   return (
     <View className="gap-4">
-      <DurationField label="Time" seconds={step.for_s} onChange={(seconds) => onChange({ kind: 'settle', for_s: seconds, ...label })} disabled={disabled} testID="settle-time" />
+      <DurationField
+        label="Time"
+        seconds={step.for_s}
+        onChange={(seconds) => onChange({ kind: 'settle', for_s: seconds, ...label })}
+        disabled={disabled}
+        testID="settle-time"
+      />
       <Label>For creep and heat after loading or touching, not against ringing: whole periods from swing to swing do that better.</Label>
     </View>
   );

@@ -51,7 +51,11 @@ function OwnFields({ step, onChange, rig, disabled }: StepFormProps) {
     case 'mark':
       return <Label>Takes no time.</Label>;
     default:
-      return <Body>This kind of step is part of the format but not of this version yet. Delete it to issue the protocol, or keep it for later.</Body>;
+      return (
+        <Body>
+          This kind of step is part of the format but not of this version yet. Delete it to issue the protocol, or keep it for later.
+        </Body>
+      );
   }
 }
 

@@ -16,7 +16,13 @@ export function WaitForm({ step, onChange, disabled }: StepFormProps<WaitStep>) 
     return (
       <View className="gap-3">
         <Body>This step waits for a channel, which this version does not do yet.</Body>
-        {disabled ? null : <Button label="Wait until 22:00 instead" className="self-start" onPress={() => onChange({ kind: 'wait', until: { localTime: '22:00' }, ...label })} />}
+        {disabled ? null : (
+          <Button
+            label="Wait until 22:00 instead"
+            className="self-start"
+            onPress={() => onChange({ kind: 'wait', until: { localTime: '22:00' }, ...label })}
+          />
+        )}
       </View>
     );
   }
@@ -27,7 +33,15 @@ export function WaitForm({ step, onChange, disabled }: StepFormProps<WaitStep>) 
   };
   return (
     <View className="gap-4">
-      <Field label="Until" type="time" value={until.localTime} onChange={(localTime) => (/^\d\d:\d\d$/.test(localTime) ? change({ localTime }) : undefined)} hint={`Lab time, ${zoneName(timeZone)}.`} disabled={disabled} testID="wait-until" />
+      <Field
+        label="Until"
+        type="time"
+        value={until.localTime}
+        onChange={(localTime) => (/^\d\d:\d\d$/.test(localTime) ? change({ localTime }) : undefined)}
+        hint={`Lab time, ${zoneName(timeZone)}.`}
+        disabled={disabled}
+        testID="wait-until"
+      />
       <Select
         label="If it is past"
         value={ifPast}

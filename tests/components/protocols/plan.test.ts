@@ -1,0 +1,85 @@
+import { makeMiniature, makePlan } from '@/components/protocols/plan';
+import { differenceWords } from '@/components/protocols/difference-words';
+import { stepTitle, stepUnder } from '@/components/protocols/step-words';
+import { compareDocuments } from '@/shared/protocol/compare';
+import type { ProtocolDocument, Step } from '@/shared/protocol/document';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+
+const pair: Step[] = [
+  { kind: 'swing', to: 'far' },
+  { kind: 'dwell', beat_periods: 2 },
+  { kind: 'swing', to: 'near' },
+  { kind: 'dwell', beat_periods: 2 },
+];
+const document: ProtocolDocument = {
+  formatVersion: 1,
+  name: 'Six pairs',
+  steps: [{ kind: 'home' }, { kind: 'swing', to: 'near' }, { kind: 'repeat', times: 6, steps: pair }],
+};
+const startUtcMs = Date.UTC(2031, 2, 14, 21, 0);
+const at = { rig: demoRigWide, timeZone: 'Europe/Oslo', startUtcMs };
+
+test('each step has the length it has by plan, a repeat all its passes', () => {
+  const { spans } = makePlan({ document, ...at });
+  // Beat of 2 periods of 420 s: 840 s from swing to swing, six pairs of two.
+  expect(spans.get('3.repeat')?.durationS).toBeCloseTo(12 * 840, 6);
+  const swing = spans.get('3.repeat.1.swing');
+  const dwell = spans.get('3.repeat.2.dwell');
+  expect((swing?.durationS ?? 0) + (dwell?.durationS ?? 0)).toBeCloseTo(840, 6);
+  expect(dwell).toMatchObject({ count: 6, station: 'far', firstKey: '3.repeat[1].2.dwell' });
+});
+
+test('the strip, the prediction and the signal are there for the whole length', () => {
+  const plan = makePlan({ document, ...at });
+  expect(plan.timeline.dwells).toBe(12);
+  expect(plan.predicted?.x[0]).toBe(startUtcMs);
+  expect(plan.predicted?.x.at(-1)).toBeCloseTo(plan.timeline.endUtcMs, 3);
+  expect(plan.signal?.signalRad).toBeGreaterThan(0);
+  expect(plan.findings).toEqual([]);
+});
+
+test('a draft that cannot run is shown with its findings instead of failing', () => {
+  const broken: ProtocolDocument = {
+    ...document,
+    steps: [
+      { kind: 'swing', to: 'atlantis' },
+      { kind: 'repeat', times: 2, steps: [] },
+    ],
+  };
+  const plan = makePlan({ document: broken, ...at });
+  expect(plan.findings.map(({ path }) => path)).toEqual(expect.arrayContaining(['1.swing', '2.repeat']));
+});
+
+test('a miniature is drawn from the same plan with fewer points', () => {
+  const mini = makeMiniature({ document, ...at });
+  expect(mini.timeline.durationS).toBe(makePlan({ document, ...at }).timeline.durationS);
+  expect(mini.predicted?.x.length).toBeLessThan(400);
+});
+
+test.each<[Step, number | null, string, string]>([
+  [{ kind: 'swing', to: 'near' }, 10, 'Swing to near', 'plain · 10\u202fs'],
+  [{ kind: 'swing', to: { angle_deg: -12.5 } }, null, 'Swing to −12.50°', 'plain'],
+  [{ kind: 'dwell', beat_periods: 2 }, 830, 'Dwell', 'beat of 2 T · 13\u202fmin 50\u202fs'],
+  [{ kind: 'dwell', periods: 1.5 }, null, 'Dwell', '1.5 T'],
+  [{ kind: 'repeat', times: 16, steps: pair }, null, 'Repeat 16 times', ''],
+  [{ kind: 'repeat', until: { localTime: '06:30' }, steps: pair }, null, 'Repeat until 06:30', ''],
+  [{ kind: 'wait', until: { localTime: '22:00', ifPast: 'hold' } }, null, 'Wait until 22:00', 'hold if past'],
+  [{ kind: 'mark', label: 'lights off' }, 0, 'Mark “lights off”', ''],
+  [{ kind: 'settle', for_s: 600, label: 'creep' }, 600, 'Settle', '10\u202fmin · “creep”'],
+])('%j reads as people would say it', (step, durationS, title, under) => {
+  expect(stepTitle(step)).toBe(title);
+  expect(stepUnder(step, durationS)).toBe(under);
+});
+
+test('differences are said with their step, before and after', () => {
+  const longer: ProtocolDocument = {
+    ...document,
+    onInterruption: 'resume',
+    steps: [{ kind: 'home' }, { kind: 'settle', for_s: 600 }, { kind: 'swing', to: 'near' }, { kind: 'repeat', times: 8, steps: pair }],
+  };
+  expect(compareDocuments(document, longer).map(differenceWords)).toEqual([
+    { mark: 'added', where: 'After an interruption', before: 'not given', after: 'resume' },
+    { mark: 'added', where: 'Step 2', before: '', after: 'Settle' },
+    { mark: 'changed', where: 'Step 4, repeat: times', before: '6', after: '8' },
+  ]);
+});
