@@ -8,7 +8,8 @@ import type { LiveSampleBatch, RigStation, RigStations, StationRig } from '../in
 import type { SampleStore } from '../interfaces/sample-store';
 import type { LinkEvent } from '../interfaces/turntable-link';
 import { createLink } from '../links/link-driver';
-import { assertPseudoTerminal, serialFactory } from './serial-lines';
+import { assertPseudoTerminal, serialFactory } from '../links/serial-line';
+import { tryLink } from '../links/try-link';
 import { findOrMakeChannel } from '../store/imports';
 import type { Connection } from '../store/database';
 import { SampleSink } from './sample-sink';
