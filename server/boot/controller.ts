@@ -1,7 +1,7 @@
 import { readFileSync, rmSync } from 'node:fs';
 import { createServer, type Socket } from 'node:net';
 import { parseArgs } from 'node:util';
-import { demoRig } from '@/shared/rig/demo-rigs';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { rigDocumentSchema, type RigMotion } from '@/shared/rig/document';
 import { createSimulatedController, type SimulatedController } from '../links/simulated-controller';
 import { RealClock } from './real-clock';
@@ -17,7 +17,7 @@ import { RealClock } from './real-clock';
  */
 const usage = `Usage: controller [options]
   --rig FILE         rig document (JSON) with motion data; default: the demo rig
-  --seed N           of boot identifier and noise; default 1
+  --seed N           of boot identifier and noise; default: the time, so that each start has a boot identifier of its own
   --homed            the position is known from the start; else it must be homed first
   --warned           the warning of 10 s before the first motion has been given
   --protocol N.N     version of the line protocol that it claims; default: its own
@@ -44,8 +44,9 @@ interface Options {
 function optionsOf(args: string[]): Options {
   const { values } = parsed(args);
   const version = values.protocol === undefined ? null : /^(\d{1,2})\.(\d{1,2})$/.exec(values.protocol);
-  if (values.protocol !== undefined && version === null) throw new Unusable(`--protocol ${values.protocol}: a version is two numbers, for example 2.0`);
-  const seed = Number(values.seed ?? '1');
+  if (values.protocol !== undefined && version === null)
+    throw new Unusable(`--protocol ${values.protocol}: a version is two numbers, for example 2.0`);
+  const seed = Number(values.seed ?? Math.floor(Date.now() / 1000) % 2 ** 24);
   if (!Number.isInteger(seed)) throw new Unusable(`--seed ${values.seed}: a whole number is needed`);
   return {
     rig: motionOf(values.rig),
@@ -69,7 +70,7 @@ function parsed(args: string[]) {
 }
 
 function motionOf(file: string | undefined): RigMotion {
-  const document = file === undefined ? demoRig() : rigDocumentSchema.parse(JSON.parse(readFileSync(file, 'utf8')));
+  const document = file === undefined ? demoRigWide : rigDocumentSchema.parse(JSON.parse(readFileSync(file, 'utf8')));
   if (document.motion === undefined) throw new Unusable(`${file}: the rig document has no "motion"; a turntable needs it`);
   return document.motion;
 }
@@ -147,7 +148,14 @@ async function main(): Promise<void> {
   process.stdout.on('error', () => process.exit(0));
   if (babbles) return babble();
   const clock = new RealClock();
-  const controller = createSimulatedController({ clock, rig, ...rest, uptimeS: 0.5, baudRate: endlessRate, ...(version === null ? {} : { version }) });
+  const controller = createSimulatedController({
+    clock,
+    rig,
+    ...rest,
+    uptimeS: 0.5,
+    baudRate: endlessRate,
+    ...(version === null ? {} : { version }),
+  });
   if (control !== null) listen(controller, control);
   await speak(controller);
 }

@@ -3,6 +3,9 @@ import { Worker } from 'node:worker_threads';
 import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { WorkerAnswer, WorkerCall } from './worker-thread';
 
+/** Node 20 carries no loader hooks into a thread, so the thread itself brings TypeScript in before it loads its file. */
+const loadThread = `require('tsx/cjs'); require(${JSON.stringify(join(__dirname, 'worker-thread.ts'))});`;
+
 interface Pending {
   resolve(value: unknown): void;
   reject(error: Error): void;
@@ -28,7 +31,7 @@ class Lane {
   }
 
   private begin(): Worker {
-    const worker = new Worker(join(__dirname, 'worker-thread.ts'), { execArgv: ['--import', 'tsx'] });
+    const worker = new Worker(loadThread, { eval: true, execArgv: [] });
     worker.unref();
     worker.on('message', (answer: WorkerAnswer) => this.answered(answer));
     worker.on('error', (error: Error) => this.broken(worker, error));
