@@ -1,6 +1,6 @@
 import { exclusionTest, type Exclusion } from '../archive/exclusions';
 import type { ChannelSeries } from '../archive/run-records';
-import { boxAverage, type BoxAverages } from '../statistics/box-average';
+import { boxAverage, medianInterval, type BoxAverages } from '../statistics/box-average';
 import { toRad, type ChannelScale } from './channel-scale';
 import type { DwellWindow } from './dwell-windows';
 
@@ -57,8 +57,7 @@ export function averagedAngles(samples: DwellSamples, scale: ChannelScale, width
 export function reasonAgainstSamples(samples: DwellSamples, averages: BoxAverages): string | null {
   if (samples.tS.length === 0) return 'no samples';
   if (averages.t.length < 8) return 'too few samples';
-  const spacingS = (((averages.t.at(-1) as number) - (averages.t[0] as number)) / (averages.t.length - 1)) * averages.t.length;
   const windowS = (samples.window.toUtcMs - samples.window.fromUtcMs) / 1000;
-  const coveredS = Math.min(spacingS, (averages.samples * windowS) / Math.max(samples.tS.length, 1));
+  const coveredS = medianInterval(samples.tS) * averages.samples;
   return coveredS < windowS / 2 ? 'samples cover less than half of it' : null;
 }

@@ -10,6 +10,11 @@ export function evaluateRecords(input: BuildArchiveInput, options: EvaluationOpt
   return evaluateArchive(readArchive(buildArchive(input, sha256Hex), sha256Hex), options);
 }
 
-export function evaluateNight(plan: NightPlan, options: EvaluationOptions = {}): Evaluation {
-  return evaluateRecords(night(plan), options);
+/** `change` stands between the night as it was and the records as they are evaluated. */
+export function evaluateNight(
+  plan: NightPlan,
+  options: EvaluationOptions = {},
+  change: (input: BuildArchiveInput) => BuildArchiveInput = (input) => input,
+): Evaluation {
+  return evaluateRecords(change(night(plan)), options);
 }
