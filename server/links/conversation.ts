@@ -283,9 +283,10 @@ export class Conversation {
     const { book, report } = this.setting;
     const hasGivenOn = (number: number) => this.events.hasGivenOn(number);
     book.resolved(hasGivenOn, (entry, input) => this.input(entry, input));
-    if (!this.following || !report.known) return;
+    // A stop is answered before the greeting of a fresh line tells whether the controller restarted: its standstill waits for that.
+    if (!this.following || !report.known || this.phase !== 'talking') return;
     if (report.atRest && hasGivenOn(report.upTo.event)) book.each((entry) => this.input(entry, { kind: 'standstill' }));
-    if (this.announced || this.phase !== 'talking' || this.events.missing !== null) return;
+    if (this.announced || this.events.missing !== null) return;
     const sameBoot = this.bootBefore === this.hi?.boot;
     this.announced = true;
     this.bootBefore = this.hi?.boot ?? null;
