@@ -13,10 +13,11 @@ interface Key {
   ctrlKey: boolean;
   metaKey: boolean;
   preventDefault: () => void;
+  stopPropagation: () => void;
 }
 
 /** The keyboard of the step list: arrows move the choice, Alt and arrows move the step, Delete, Enter for details. */
-function useListKeys(): (event: Key) => void {
+function useListKeys(acted: () => void): (event: Key) => void {
   const editor = useEditor();
   const { document, selected, mayWrite } = editor;
   const step = (by: number) => {
@@ -41,7 +42,10 @@ function useListKeys(): (event: Key) => void {
     if (event.ctrlKey || event.metaKey) return;
     const act = (event.altKey ? withAlt : plain)[event.key];
     if (act === undefined) return;
+    // Before the row sees it: a pressable takes Enter for itself.
     event.preventDefault();
+    event.stopPropagation();
+    acted();
     act();
   };
 }
@@ -49,12 +53,17 @@ function useListKeys(): (event: Key) => void {
 /** All steps of the draft, repeats with theirs inside. */
 export function StepList() {
   const { document, selected } = useEditor();
-  const onKeyDown = useListKeys();
   const host = useRef<View>(null);
+  // A moved step is a new element, and the old one takes the focus away with it.
+  const byKey = useRef(false);
+  const onKeyDownCapture = useListKeys(() => {
+    byKey.current = true;
+  });
   const key = selected?.join('.') ?? '';
   useEffect(() => {
     const list = host.current as unknown as HTMLElement | null;
-    if (key === '' || list === null || !list.contains(window.document.activeElement)) return;
+    if (key === '' || list === null || !byKey.current) return;
+    byKey.current = false;
     list.querySelector<HTMLElement>(`[data-path="${key}"]`)?.focus();
   }, [key, document]);
   if (document.steps.length === 0) {
@@ -65,7 +74,7 @@ export function StepList() {
     );
   }
   return (
-    <View ref={host} role="tree" aria-label="Steps" testID="step-list" {...{ onKeyDown }}>
+    <View ref={host} role="tree" aria-label="Steps" testID="step-list" {...{ onKeyDownCapture }}>
       <Rows steps={document.steps} around={[]} />
     </View>
   );
