@@ -105,11 +105,11 @@ const windowParameters = (window: SampleWindow) => [window.labId, window.channel
 export async function extremesOf(connection: Connection, window: SampleWindow, intervals: number): Promise<{ utcMs: number[]; value: number[] }> {
   const result = await connection.pool.query<{ ms: number; value: number }>(
     `with part as materialized (
-       select at, value, least($5::int - 1, floor(extract(epoch from at - $3::timestamptz) / nullif(extract(epoch from $4::timestamptz - $3::timestamptz), 0) * $5)::int) as number
+       select at, value, coalesce(least($5::int - 1, floor(extract(epoch from at - $3::timestamptz) / nullif(extract(epoch from $4::timestamptz - $3::timestamptz), 0) * $5)::int), 0) as number
        from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4),
      bound as (select number, min(value) as low, max(value) as high from part group by number)
      select (extract(epoch from min(part.at)) * 1000)::double precision as ms, part.value
-     from part join bound on bound.number is not distinct from part.number
+     from part join bound using (number)
      where part.value = bound.low or part.value = bound.high
      group by part.number, part.value order by 1`,
     [...windowParameters(window), intervals],
