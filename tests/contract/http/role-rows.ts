@@ -1,0 +1,106 @@
+import { randomUUID } from 'node:crypto';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import type { ProtocolDocument } from '@/shared/protocol/document';
+
+/** Ids of one lab's things, enough to fill every address of the API. */
+export interface Things {
+  labId: string;
+  rigId: string;
+  massSetId: string;
+  protocolId: string;
+  protocolEtag: string;
+  runId: string;
+  importId: string;
+  evaluationId: string;
+  invitationId: string;
+  userId: string;
+}
+
+export interface Row {
+  params?: (things: Things) => Record<string, string>;
+  query?: (things: Things) => Record<string, string>;
+  body?: (things: Things) => unknown;
+  raw?: string;
+  ifMatch?: (things: Things) => string;
+  /** Status for whoever may: the answer to a harmless request, which may well be a refusal by the state of things. */
+  allowed: number;
+}
+
+export const shortProtocol = (name: string): ProtocolDocument => ({
+  formatVersion: 1,
+  name,
+  steps: [
+    { kind: 'home' }, { kind: 'swing', to: 'near' }, { kind: 'dwell', for_s: 60 }, { kind: 'swing', to: 'far' }, { kind: 'dwell', for_s: 60 },
+  ],
+});
+
+export const mapping = { delimiter: ',', decimal: '.', headerRow: true, timeColumn: 0, timeFormat: 'iso', valueColumn: 1, unit: 'urad' } as const;
+
+const lab = ({ labId }: Things) => ({ labId });
+const rig = ({ labId, rigId }: Things) => ({ labId, rigId });
+const run = ({ labId, runId }: Things) => ({ labId, runId });
+const protocol = ({ labId, protocolId }: Things) => ({ labId, protocolId });
+const file = ({ labId, importId }: Things) => ({ labId, importId });
+const nobody = randomUUID();
+
+/** One row for every route of the API; a route without a row fails the test of the matrix. */
+export const rows: Readonly<Record<string, Row>> = {
+  getHealth: { allowed: 200 },
+  getOpenApi: { allowed: 200 },
+  getProtocolSchema: { allowed: 200 },
+  signIn: { body: () => ({ email: 'nobody@quillfen.example', password: 'not the right one' }), allowed: 401 },
+  getMe: { allowed: 200 },
+  signOut: { allowed: 204 },
+  requestPasswordReset: { body: () => ({ email: 'nobody@quillfen.example' }), allowed: 202 },
+  completePasswordReset: { body: () => ({ token: 'none', password: 'quartz lantern moss seven' }), allowed: 404 },
+  getInvitation: { params: () => ({ token: 'none' }), allowed: 404 },
+  acceptInvitation: { params: () => ({ token: 'none' }), body: () => ({ password: 'quartz lantern moss seven' }), allowed: 404 },
+  getLab: { params: lab, allowed: 200 },
+  changeLab: { params: lab, body: () => ({}), allowed: 200 },
+  listMembers: { params: lab, allowed: 200 },
+  invite: { params: lab, body: () => ({ email: `${randomUUID()}@quillfen.example`, role: 'viewer' }), allowed: 201 },
+  withdrawInvitation: { params: ({ labId }) => ({ labId, invitationId: nobody }), allowed: 404 },
+  changeMemberRole: { params: ({ labId }) => ({ labId, userId: nobody }), body: () => ({ role: 'viewer' }), allowed: 404 },
+  removeMember: { params: ({ labId }) => ({ labId, userId: nobody }), allowed: 404 },
+  listAudit: { params: lab, allowed: 200 },
+  listRigs: { params: lab, allowed: 200 },
+  createRig: { params: lab, body: () => ({ name: 'Another bench', document: demoRigWide, link: { kind: 'serial', path: '/dev/null' } }), allowed: 422 },
+  getRig: { params: rig, allowed: 200 },
+  reviseRig: { params: rig, body: () => ({ name: 'North bench', document: demoRigWide, reason: 'again' }), ifMatch: () => '"77"', allowed: 412 },
+  listRigRevisions: { params: rig, allowed: 200 },
+  changeLink: { params: rig, body: () => ({ kind: 'serial', path: '/dev/null' }), allowed: 422 },
+  tryLink: { params: rig, body: () => ({ kind: 'simulated' }), allowed: 200 },
+  arm: { params: rig, body: () => ({ name: 'Somebody', until: '2020-01-01T00:00:00Z', cautionsRead: true }), allowed: 400 },
+  disarm: { params: rig, allowed: 404 },
+  addMassSet: { params: rig, body: () => ({ label: `Set ${randomUUID()}`, sources: demoRigWide.sources }), allowed: 201 },
+  startChecks: { params: rig, query: ({ protocolId }) => ({ protocolId, revision: '1' }), allowed: 200 },
+  listProtocols: { params: lab, allowed: 200 },
+  createProtocol: { params: lab, body: () => ({ document: shortProtocol('Made in passing') }), allowed: 201 },
+  getProtocol: { params: protocol, allowed: 200 },
+  saveProtocol: { params: protocol, body: () => ({ document: shortProtocol('Not saved') }), ifMatch: () => '"77"', allowed: 412 },
+  deleteProtocol: { params: protocol, allowed: 409 },
+  issueRevision: { params: protocol, body: ({ rigId }) => ({ rigId }), ifMatch: ({ protocolEtag }) => protocolEtag, allowed: 409 },
+  getRevision: { params: (things) => ({ ...protocol(things), revision: '1' }), allowed: 200 },
+  listRuns: { params: lab, allowed: 200 },
+  startRun: { params: lab, body: ({ rigId, protocolId, massSetId }) => ({ rigId, protocolId, revision: 1, massSetId }), allowed: 409 },
+  rehearse: { params: lab, body: ({ rigId, protocolId }) => ({ rigId, protocolId, revision: 1 }), allowed: 202 },
+  getRun: { params: run, allowed: 200 },
+  holdRun: { params: run, body: () => ({}), allowed: 409 },
+  holdAfterDwell: { params: run, body: () => ({}), allowed: 409 },
+  resumeRun: { params: run, body: () => ({}), allowed: 409 },
+  stopRun: { params: run, body: () => ({}), allowed: 409 },
+  liveRun: { params: run, allowed: 200 },
+  listSteps: { params: run, allowed: 200 },
+  stepsCsv: { params: run, allowed: 200 },
+  listEvents: { params: run, allowed: 200 },
+  downloadArchive: { params: run, allowed: 200 },
+  listChannels: { params: rig, allowed: 200 },
+  beginImport: { params: run, body: () => ({ fileName: 'deflection.csv' }), allowed: 201 },
+  putImportContent: { params: file, raw: 'time_utc,deflection_urad\n2031-02-14T20:00:00Z,1\n2031-02-14T20:00:01Z,2\n', allowed: 200 },
+  checkImport: { params: file, body: () => ({ mapping }), allowed: 200 },
+  commitImport: { params: file, body: () => ({ mapping: { ...mapping, valueColumn: 0 }, channelName: 'readout' }), allowed: 400 },
+  readSamples: { params: run, allowed: 200 },
+  startEvaluation: { params: run, body: () => ({ channel: 'no such channel' }), allowed: 422 },
+  listEvaluations: { params: run, allowed: 200 },
+  getEvaluation: { params: ({ labId, evaluationId }) => ({ labId, evaluationId }), allowed: 200 },
+};
