@@ -1,0 +1,45 @@
+import type { RigMotion } from '@/shared/rig/document';
+import type { ByteLineFactory } from '@/server/interfaces/byte-line';
+import type { Clock } from '@/server/interfaces/clock';
+
+/** A controller on its line, with everything that the conformance suite does to it. One suite, any number of benches. */
+export interface LinkBench {
+  clock: Clock;
+  factory: ByteLineFactory;
+  /** Lets time pass until `met`; fails with `what` when it is not met within `withinMs`. */
+  until(what: string, met: () => boolean, withinMs: number): Promise<void>;
+  pass(ms: number): Promise<void>;
+  /** Where the turntable truly stands, deg. */
+  trueAngleDeg(): Promise<number>;
+  reset(): Promise<void>;
+  /** The line is dead for so long. */
+  drop(ms: number): Promise<void>;
+  garbage(ms: number): Promise<void>;
+  interlock(level: 'open' | 'closed'): Promise<void>;
+  /** The port disappears, as a USB plug that is pulled; and comes back. */
+  unplug(): Promise<void>;
+  plug(): Promise<void>;
+  dispose(): Promise<void>;
+}
+
+export interface BenchMaker {
+  name: string;
+  /** A controller whose position is known and whose warning is over. */
+  make(): Promise<LinkBench>;
+  /** The same line with something else at its end. */
+  makeStranger(kind: 'babble' | 'other-major'): Promise<LinkBench>;
+  /** How far the logged beginning of a timed move may lie from the one asked for, s. */
+  beginToleranceS: number;
+  dispose(): Promise<void>;
+}
+
+/** A quick turntable, so that real time is short: 100° take 4 s. */
+export const benchRig: RigMotion = {
+  stepsPerDegree: 100,
+  minDeg: -170,
+  maxDeg: 170,
+  maxSpeed_deg_s: 30,
+  maxAcceleration_deg_s2: 60,
+  homeDeg: 0,
+  homeSpeed_deg_s: 10,
+};
