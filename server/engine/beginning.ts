@@ -49,8 +49,9 @@ export const known = (state: ControllerState): KnownController => ({
 
 /** Takes down the controller that answers at the start. */
 export function noteBeginning(draft: Draft): void {
-  if (draft.event.type !== 'begin' || draft.event.controller === null) return;
-  draft.context.controller = known(draft.event.controller);
+  const { controller } = draft.told('begin');
+  if (controller === null) return;
+  draft.context.controller = known(controller);
   draft.context.linkUp = true;
 }
 

@@ -1,7 +1,7 @@
 import type { RunStart, StepOutcome, StepRow } from '@/shared/archive/run-records';
 import type { Instant } from '../interfaces/clock';
 import type { LinkCommand } from '../interfaces/turntable-link';
-import type { ActiveStep, Effect, Happening, KnownController, NoticeTopic, Reason, RunContext, RunEvent } from './run-context';
+import type { ActiveStep, Effect, Happening, KnownController, Motion, NoticeTopic, Reason, RunContext, RunEvent, RunEventOf, RunEventType } from './run-context';
 
 /** What one transition gives out besides the new context. */
 export interface Output {
@@ -39,6 +39,26 @@ export class Draft {
     return this.event.at.utcMs;
   }
 
+  /** The event, which the chart has brought here only when it is of this type. */
+  told<T extends RunEventType>(type: T): RunEventOf<T> {
+    if (this.event.type !== type) throw new Error(`${this.event.type} was taken for ${type}`);
+    return this.event as RunEventOf<T>;
+  }
+
+  /** The present step; the chart is in a state that has one. */
+  get step(): ActiveStep {
+    const { step } = this.context;
+    if (step === null) throw new Error('there is no present step');
+    return step;
+  }
+
+  /** The motion of the present step, likewise. */
+  get motion(): Motion {
+    const { motion } = this.step;
+    if (motion === null) throw new Error('the present step has no motion');
+    return motion;
+  }
+
   /** The controller's own stamp where the event carries one, else the server's. */
   get stamp(): Instant {
     return 'link' in this.event ? this.event.link.at : this.event.at;
@@ -72,8 +92,10 @@ export class Draft {
 
   /** Takes up a row that was begun or changed, so that the transition saves it. */
   saveRow(row: StepRow): void {
-    const others = this.out.steps.filter(({ seq }) => seq !== row.seq);
-    this.out.steps = [...others, structuredClone(row)].sort((a, b) => a.seq - b.seq);
+    const { steps } = this.out;
+    const last = steps.at(-1);
+    if (last === undefined || last.seq < row.seq) steps.push(structuredClone(row));
+    else steps[steps.findIndex(({ seq }) => seq === row.seq)] = structuredClone(row);
   }
 
   /** Makes `step` the present one and opens its row, whose sequence number is given here. */

@@ -45,8 +45,7 @@ function halt(draft: Draft, commandId: string): void {
 
 /** A person's hold: logged with the name before anything else. */
 export function requestHold(draft: Draft): void {
-  if (draft.event.type !== 'hold') return;
-  const { by } = draft.event;
+  const { by } = draft.told('hold');
   draft.log('hold-requested', { by });
   draft.because('held-by-person', `${by} asked to hold.`);
   draft.context.intervention = { kind: 'hold', by, serverAtUtcMs: draft.nowUtcMs, confirmedAtUtcMs: null, commandId: null };
@@ -54,8 +53,7 @@ export function requestHold(draft: Draft): void {
 }
 
 export function requestStop(draft: Draft): void {
-  if (draft.event.type !== 'stop') return;
-  const { by } = draft.event;
+  const { by } = draft.told('stop');
   draft.log('stop-requested', { by });
   draft.because('stopped-by-person', `${by} stopped the run.`);
   draft.context.intervention = { kind: 'stop', by, serverAtUtcMs: draft.nowUtcMs, confirmedAtUtcMs: null, commandId: null };
@@ -64,8 +62,7 @@ export function requestStop(draft: Draft): void {
 
 /** `Hold after this dwell`: a move that already waits in the controller is cancelled, the dwell goes on to its end. */
 export function requestHoldAfterDwell(draft: Draft): void {
-  if (draft.event.type !== 'hold-after-dwell') return;
-  const { by } = draft.event;
+  const { by } = draft.told('hold-after-dwell');
   const { context } = draft;
   draft.log('hold-after-dwell-requested', { by });
   context.holdAfterStep = by;
@@ -170,18 +167,15 @@ export function carryOn(draft: Draft): void {
 
 /** Why a person's resume is refused; null where it may go on. */
 export function resumeRefusal(draft: Draft): string | null {
-  if (draft.event.type !== 'resume') return null;
-  return motionRefusal(draft, draft.start.simulated === null ? draft.event.arm : 'simulated', null);
+  return motionRefusal(draft, draft.start.simulated === null ? draft.told('resume').arm : 'simulated', null);
 }
 
 export function noteRefusedResume(draft: Draft): void {
-  if (draft.event.type !== 'resume') return;
-  draft.log('resume-refused', { by: draft.event.by, why: resumeRefusal(draft) });
+  draft.log('resume-refused', { by: draft.told('resume').by, why: resumeRefusal(draft) });
 }
 
 export function resume(draft: Draft): void {
-  if (draft.event.type !== 'resume') return;
-  const { by, arm } = draft.event;
+  const { by, arm } = draft.told('resume');
   const { context } = draft;
   Object.assign(context, { arm, armVoid: null, holdAfterStep: null, interruption: null, reason: null, haltedAtUtcMs: null });
   context.intervention = { kind: 'resume', by, serverAtUtcMs: draft.nowUtcMs, confirmedAtUtcMs: null, commandId: null };
@@ -230,7 +224,7 @@ export function closeForRest(draft: Draft): void {
     context.step = null;
     return;
   }
-  const at: Instant = { utcMs: step.row.endUtcMs ?? draft.stamp.utcMs, uS: step.row.uEndS ?? restU(draft) };
+  const at: Instant = { utcMs: step.row.endUtcMs ?? Math.max(draft.stamp.utcMs, step.row.startUtcMs), uS: step.row.uEndS ?? restU(draft) };
   step.row.station = '';
   draft.closeRow({ at, angleDeg: step.row.angleEndDeg, outcome: 'cut short' });
 }

@@ -32,14 +32,13 @@ export function takeAhead(draft: Draft): void {
 /** The controller's stamp of the beginning goes into the row; from it a beat is counted. */
 export function noteBegan(draft: Draft): void {
   const { context, event } = draft;
-  const { step } = context;
-  if (step?.motion == null) return;
+  const { step, motion } = draft;
   const seen = event.type === 'link.motion-began';
-  const stamp = seen ? draft.stamp : { utcMs: step.motion.startUtcMs ?? step.row.startUtcMs, uS: context.uPlanS };
-  step.motion.began = true;
+  const stamp = seen ? draft.stamp : { utcMs: motion.startUtcMs ?? step.row.startUtcMs, uS: context.uPlanS };
+  motion.began = true;
   context.moveRetries = 0;
   context.uPlanS = stamp.uS;
-  if (context.onCadence && stamp.utcMs - step.row.plannedStartUtcMs > LATE_MS) step.motion.late = true;
+  if (context.onCadence && stamp.utcMs - step.row.plannedStartUtcMs > LATE_MS) motion.late = true;
   Object.assign(step.row, { startUtcMs: stamp.utcMs, uStartS: stamp.uS });
   if (seen && event.link.angleDeg !== null) step.row.angleStartDeg = event.link.angleDeg;
   if (step.row.kind === 'swing') context.swingStartUtcMs = stamp.utcMs;
@@ -49,8 +48,7 @@ export function noteBegan(draft: Draft): void {
 
 /** From its beginning on, a motion may take as long as its profile and some grace. */
 export function expectEnd(draft: Draft): void {
-  const { step } = draft.context;
-  if (step?.motion != null) draft.context.deadlineUtcMs = draft.stamp.utcMs + step.motion.durationMs + MOTION_GRACE_MS;
+  draft.context.deadlineUtcMs = draft.stamp.utcMs + draft.motion.durationMs + MOTION_GRACE_MS;
 }
 
 /** The controller refused or cancelled the move that was sent ahead: it is made at once when the step ends. */
@@ -58,20 +56,16 @@ export function dropAhead(draft: Draft): void {
   const { context } = draft;
   context.ahead = null;
   context.moveRetries += 1;
-  if (context.step !== null) context.deadlineUtcMs = standingEndUtcMs(context.step);
+  context.deadlineUtcMs = standingEndUtcMs(draft.step);
 }
 
 /** The controller could not take the motion just now: it is asked again, under a new id. */
 export function askAgain(draft: Draft): void {
-  const { context, start } = draft;
-  const { step } = context;
-  if (step?.motion == null) return;
+  const { context, start, motion } = draft;
+  const planned = draft.step.item.step;
   context.moveRetries += 1;
-  if (step.item.step.kind !== 'swing') {
-    step.motion.commandId = draft.command((id) => ({ kind: 'home', id }));
-    return;
-  }
-  step.motion.commandId = sendMove(draft, swingMove(step.item.step, start.rig, context.moment.angleDeg), null);
+  motion.commandId =
+    planned.kind === 'swing' ? sendMove(draft, swingMove(planned, start.rig, context.moment.angleDeg), null) : draft.command((id) => ({ kind: 'home', id }));
 }
 
 function confirmResume(draft: Draft): void {
@@ -81,22 +75,20 @@ function confirmResume(draft: Draft): void {
 
 /** The motion is over, as planned or not: the row gets the controller's stamp and the achieved angle, and stays open. */
 export function noteEnded(draft: Draft): void {
-  const { context, stamp, event } = draft;
-  if (event.type !== 'link.motion-ended' && event.type !== 'link.homed') return;
-  const { angleDeg } = event.link;
+  const { context, stamp, event, step, motion } = draft;
+  const ending = event.type === 'link.homed' ? { angleDeg: event.link.angleDeg, cause: 'done' } : draft.told('link.motion-ended').link;
+  const { angleDeg } = ending;
   context.uPlanS = stamp.uS;
-  if (context.controller !== null) Object.assign(context.controller, { moving: false, angleDeg, positionKnown: angleDeg !== null });
-  const { step } = context;
-  if (step?.motion == null) return;
-  step.motion.ended = true;
+  Object.assign(draft.controller, { moving: false, angleDeg, positionKnown: angleDeg !== null });
+  motion.reached = ending.cause === 'done';
   Object.assign(step.row, { endUtcMs: stamp.utcMs, uEndS: stamp.uS, angleEndDeg: angleDeg });
 }
 
 /** The motion ended where it should: the row is done and the sources stand. */
 export function finishMotion(draft: Draft): void {
-  const { step, moment } = draft.context;
-  if (step?.motion == null) return;
-  const { row, motion } = step;
+  const { moment } = draft.context;
+  const { motion } = draft;
+  const { row } = draft.step;
   const at: Instant = { utcMs: row.endUtcMs ?? draft.stamp.utcMs, uS: row.uEndS ?? draft.stamp.uS };
   const outcome: StepOutcome = motion.late ? 'late' : 'done';
   if (row.kind === 'home') row.angleSource = 'edge-verified';
@@ -105,10 +97,10 @@ export function finishMotion(draft: Draft): void {
   draft.context.onCadence = false;
 }
 
-/** Whether the motion that was noted as ended reached what it was sent to. */
+/** Whether the motion reached what it was sent to: the controller said so, or the sources stand there. */
 export function reachedTarget(draft: Draft): boolean {
-  const { step } = draft.context;
-  const angleDeg = step?.row.angleEndDeg ?? null;
-  if (step?.motion == null || angleDeg === null) return false;
-  return step.motion.targetDeg === null || Math.abs(angleDeg - step.motion.targetDeg) <= toleranceDeg(draft);
+  const { targetDeg, reached } = draft.motion;
+  if (reached) return true;
+  const { angleEndDeg } = draft.step.row;
+  return angleEndDeg !== null && targetDeg !== null && Math.abs(angleEndDeg - targetDeg) <= toleranceDeg(draft);
 }

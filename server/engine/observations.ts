@@ -9,9 +9,9 @@ import { noteGrave } from './halting';
 const EDGE_TOLERANCE_DEG = 0.02;
 
 export function noteReady(draft: Draft): void {
-  if (draft.event.type !== 'link.ready') return;
+  const { link } = draft.told('link.ready');
   const { context } = draft;
-  const { controller } = draft.event.link;
+  const { controller } = link;
   const { linkDownSinceUtcMs } = context;
   context.controller = known(controller);
   context.linkUp = true;
@@ -27,33 +27,32 @@ export function hasRestarted(context: RunContext, bootId: string): boolean {
 }
 
 export function noteLost(draft: Draft): void {
-  if (draft.event.type !== 'link.lost') return;
+  const { link } = draft.told('link.lost');
   draft.context.linkUp = false;
   draft.context.linkDownSinceUtcMs ??= draft.stamp.utcMs;
-  draft.log('link-lost', { why: draft.event.link.why });
+  draft.log('link-lost', { why: link.why });
 }
 
 /** The position is gone; whatever moved is over. */
 export function noteReset(draft: Draft): void {
   const { event, context } = draft;
-  const bootId = event.type === 'link.reset' ? event.link.bootId : event.type === 'link.ready' ? event.link.controller.bootId : null;
-  if (bootId === null) return;
+  const bootId = event.type === 'link.ready' ? event.link.controller.bootId : draft.told('link.reset').link.bootId;
   if (context.controller !== null) Object.assign(context.controller, { bootId, positionKnown: false, angleDeg: null, moving: false });
   draft.log('controller-reset', { bootId });
   noteGrave(draft, 'controller-reset');
 }
 
 export function noteInterlock(draft: Draft): void {
-  if (draft.event.type !== 'link.interlock') return;
-  const { closed } = draft.event.link;
+  const { link } = draft.told('link.interlock');
+  const { closed } = link;
   if (draft.context.controller !== null) draft.context.controller.interlockClosed = closed;
   draft.log('interlock', { closed });
   if (!closed) noteGrave(draft, 'interlock');
 }
 
 export function noteSupply(draft: Draft): void {
-  if (draft.event.type !== 'link.supply') return;
-  const { present } = draft.event.link;
+  const { link } = draft.told('link.supply');
+  const { present } = link;
   const { controller } = draft.context;
   if (controller !== null) controller.supplyPresent = present;
   if (controller !== null && !present) Object.assign(controller, { positionKnown: false, angleDeg: null });
@@ -62,17 +61,17 @@ export function noteSupply(draft: Draft): void {
 }
 
 export function noteArmKey(draft: Draft): void {
-  if (draft.event.type === 'link.arm-key') draft.log('arm-key', { on: draft.event.link.on });
+  draft.log('arm-key', { on: draft.told('link.arm-key').link.on });
 }
 
 export function noteLease(draft: Draft): void {
-  if (draft.event.type === 'link.lease-lapsed') draft.log('lease-lapsed');
+  draft.log('lease-lapsed');
 }
 
 /** Each pass of the home edge proves the counted angle, or tells by how much it is off. */
 export function noteEdge(draft: Draft): void {
-  if (draft.event.type !== 'link.edge') return;
-  const { angleDeg, direction } = draft.event.link;
+  const { link } = draft.told('link.edge');
+  const { angleDeg, direction } = link;
   const { homeDeg = 0, backlash_deg: backlashDeg = 0 } = draft.start.rig.motion ?? {};
   const offDeg = angleDeg - homeDeg;
   draft.log('home-edge', { angleDeg, direction, offDeg });
@@ -83,21 +82,21 @@ export function noteEdge(draft: Draft): void {
 }
 
 export function noteStandstill(draft: Draft): void {
-  if (draft.event.type !== 'link.standstill') return;
-  const { angleDeg } = draft.event.link;
+  const { link } = draft.told('link.standstill');
+  const { angleDeg } = link;
   if (draft.context.controller !== null) Object.assign(draft.context.controller, { moving: false, angleDeg, positionKnown: angleDeg !== null });
 }
 
 export function noteRefusal(draft: Draft): void {
-  if (draft.event.type !== 'link.refused') return;
-  const { commandId, code, message } = draft.event.link;
+  const { link } = draft.told('link.refused');
+  const { commandId, code, message } = link;
   draft.log('command-refused', { commandId, code, message });
 }
 
 /** The turntable moves and this run did not ask for it. */
 export function noteStrangeMotion(draft: Draft): void {
-  if (draft.event.type !== 'link.motion-began') return;
-  const { commandId, angleDeg } = draft.event.link;
+  const { link } = draft.told('link.motion-began');
+  const { commandId, angleDeg } = link;
   draft.log('unexpected-motion', { commandId, angleDeg });
   draft.because('unexpected-motion', 'The turntable moved without a command of this run. Somebody has to look at the rig before it moves again.');
 }

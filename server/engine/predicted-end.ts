@@ -14,11 +14,21 @@ export function predictEndUtcMs(start: RunStart, context: RunContext, { nowUtcMs
   let { cursor } = context;
   let state = afterPresentStep(context, nowUtcMs);
   for (;;) {
-    const next = advanceCursor(start, cursor, state);
-    if (next.item === null) return state.utcMs;
+    const next = advanceIfPossible(start, cursor, state);
+    if (next === null || next.item === null) return state.utcMs;
     cursor = next.cursor;
     eachStep?.(next.item.path, state.utcMs);
     state = stateAfterIfPossible(next.item.step, start, state);
+  }
+}
+
+/** Null for a protocol that goes on for ever: the run will say so when it gets there. */
+function advanceIfPossible(...args: Parameters<typeof advanceCursor>): ReturnType<typeof advanceCursor> | null {
+  try {
+    return advanceCursor(...args);
+  } catch (error) {
+    if (error instanceof RangeError) return null;
+    throw error;
   }
 }
 

@@ -18,6 +18,8 @@ export interface SupervisorParts {
   armOf(rigId: string): Arm | null;
   /** Notifications and the end of the arm. */
   perform(effect: Exclude<Effect, { kind: 'link' }>, start: RunStart): void;
+  /** An error that is nobody's answer, to be logged. */
+  onError?(error: unknown, start: RunStart): void;
 }
 
 export type StartRefusalCode = 'rig-busy' | 'not-armed' | 'not-ready' | 'protocol-refused' | 'not-yet';
@@ -144,11 +146,12 @@ export class RigSupervisor {
   }
 
   private drive(start: RunStart, stored: StoredRun | null, link: TurntableLink): RunDriver {
-    const { store, clock, sha256, armOf, perform } = this.parts;
+    const { store, clock, sha256, armOf, perform, onError } = this.parts;
     const driver = new RunDriver({
       start, stored, store, clock, sha256, link,
       armNow: () => armOf(start.rigId),
       perform: (effect) => perform(effect, start),
+      onError: (error) => onError?.(error, start),
     });
     this.byRig.set(start.rigId, driver);
     driver.onChange((change) => {

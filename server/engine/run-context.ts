@@ -32,7 +32,8 @@ export interface Motion {
   late: boolean;
   /** The controller said so. */
   began: boolean;
-  ended: boolean;
+  /** It ended where it was sent to, by the controller's own word. */
+  reached: boolean;
 }
 
 /** The step that is being executed, or that a hold has left unfinished. */

@@ -1,12 +1,14 @@
 import { appendEvent, type ChainHead, emptyChain, type Sha256 } from '@/shared/archive/chain';
 import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
-import type { Cancel, Clock, Instant } from '../interfaces/clock';
+import type { Clock, Instant } from '../interfaces/clock';
 import { type RunStore, StaleRunError, type StoredRun } from '../interfaces/run-store';
 import type { LinkEvent, TurntableLink } from '../interfaces/turntable-link';
-import { advance, beginRun, deadlineOf, isRunOver, wantsMotion } from './chart';
+import { beginRun, deadlineOf, isRunOver, wantsMotion } from './chart';
 import { type Advance, type Arm, CHART_VERSION, type Effect, type Happening, type RunEvent, type RunSnapshot } from './run-context';
+import { advanceSafely } from './advance-safely';
 import { createPredictor, factsOf, mayResume, plannedDwells, type RunFacts, summaryOf } from './run-facts';
 import { DATABASE_GRACE_MS, RunSaver } from './run-saver';
+import { ALIVE_MS, RunTimers } from './run-timers';
 
 export interface RunDriverParts {
   start: RunStart;
@@ -20,7 +22,9 @@ export interface RunDriverParts {
   /** The arm of the rig now; null when nobody answers for it. */
   armNow(): Arm | null;
   /** Notifications and the end of the arm, performed after they were saved. */
-  perform(effect: Exclude<Effect, { kind: 'link' }>): void;
+  perform(effect: OwnEffect): void;
+  /** An error that is nobody's answer: of a listener, of `perform`, or one that made the driver let go of the run. */
+  onError?(error: unknown): void;
 }
 
 /** What one saved transition changed. */
@@ -32,19 +36,22 @@ export interface RunChange {
 
 export type Answer = { ok: true; serverAtUtcMs: number } | { ok: false; why: string };
 
-/** Snapshot as stored: with the instant until which the process is known to have lived. */
+type OwnEffect = Exclude<Effect, { kind: 'link' }>;
+
+/** Snapshot as stored, with what the next process has to know of this one. */
 export interface StoredSnapshot extends RunSnapshot {
+  /** Until when the process is known to have lived. */
   aliveUtcMs: number;
+  /** Effects that were to be performed after this write; commands to the controller are not repeated, the run reconciles instead. */
+  toPerform: OwnEffect[];
 }
 
 type Item = { event: RunEvent; done?: (result: Advance | null) => void } | 'beat' | 'alive';
 
-/** The loop says that it lives twice a second while something may move, and every 30 s in the database. */
-const BEAT_MS = 500;
+/** Uncertainty of instants that the server itself stamps, s: the length of one turn of its loop (an estimate, no source). */
+const SERVER_U_S = 0.001;
+/** A loop that has not turned for so long is taken for stuck. */
 const LONGEST_BEAT_MS = 1500;
-const ALIVE_MS = 30_000;
-/** A wall clock may step: a far deadline is looked at again at least this often. */
-const LONGEST_WAIT_MS = 60_000;
 
 /**
  * Drives one run: takes one event at a time through the chart, saves what came of it in one transaction, then performs the
@@ -64,7 +71,7 @@ export class RunDriver {
   private acted = 0;
   private lastBeatMs = -Infinity;
   private savedMs: number;
-  private readonly timers: Partial<Record<'deadline' | 'beat' | 'alive', Cancel>> = {};
+  private readonly timers: RunTimers;
   private readonly saver: RunSaver;
   private readonly listeners = new Set<(change: RunChange) => void>();
   private readonly waiting: (() => void)[] = [];
@@ -80,6 +87,11 @@ export class RunDriver {
     this.savedMs = clock.monotonicMs();
     this.predict = createPredictor(start);
     this.saver = new RunSaver({ store, clock, onAway: (sinceUtcMs) => this.databaseIsAway(sinceUtcMs) });
+    this.timers = new RunTimers(clock, {
+      deadline: (utcMs) => this.enqueue({ event: { type: 'deadline', at: { utcMs, uS: SERVER_U_S } } }),
+      beat: () => this.enqueue('beat'),
+      alive: () => this.enqueue('alive'),
+    });
     this.unsubscribe = link.subscribe((event) => this.heard(event));
     link.setLeaseRule(() => this.mayRenewLease());
   }
@@ -89,17 +101,18 @@ export class RunDriver {
     const { link } = this.parts;
     const controller = link.health().condition === 'ready' ? link.controller() : null;
     this.enqueue({ event: { type: 'begin', at: this.now(), controller } });
-    this.scheduleAlive();
+    this.timers.keepAlive();
   }
 
   /** Takes up a run that another process left unfinished. */
   recover(): void {
     const { link, stored, clock } = this.parts;
-    const aliveUtcMs = (stored?.snapshot as StoredSnapshot | null | undefined)?.aliveUtcMs ?? clock.utcMs();
+    const { aliveUtcMs = clock.utcMs(), toPerform = [] } = (stored?.snapshot ?? {}) as Partial<StoredSnapshot>;
+    for (const effect of toPerform) this.outside(() => this.parts.perform(effect));
     this.enqueue({ event: { type: 'server-restarted', at: this.now(), aliveUtcMs } });
     const controller = link.health().condition === 'ready' ? link.controller() : null;
     if (controller !== null) this.heard({ kind: 'ready', at: this.now(), controller, sameBoot: true });
-    this.scheduleAlive();
+    this.timers.keepAlive();
   }
 
   /** Decelerates at once; saved after that. Holding a run that is held already changes nothing. */
@@ -118,6 +131,7 @@ export class RunDriver {
   /** Holds when the present step has ended. */
   holdAfterDwell(by: string): Answer {
     if (this.isOver()) return { ok: false, why: 'The run is over.' };
+    if (this.snapshot.state === 'held' || this.snapshot.state === 'holding') return { ok: false, why: 'The run is held already.' };
     const at = this.now();
     this.enqueue({ event: { type: 'hold-after-dwell', at, by } });
     return { ok: true, serverAtUtcMs: at.utcMs };
@@ -126,7 +140,8 @@ export class RunDriver {
   /** Answers when it is saved: it starts motion, so nothing goes to the controller before. */
   async resume(by: string): Promise<Answer> {
     const now = this.now();
-    const arm = this.parts.armNow();
+    const standing = this.parts.armNow();
+    const arm = standing === null ? null : { name: standing.name, untilUtcMs: standing.untilUtcMs };
     const allowed = mayResume(this.parts.start, this.snapshot, { utcMs: now.utcMs, arm });
     if (!allowed.ok) return { ok: false, why: allowed.why };
     const result = await new Promise<Advance | null>((done) => this.enqueue({ event: { type: 'resume', at: now, by, arm }, done }));
@@ -183,7 +198,7 @@ export class RunDriver {
     this.saver.close();
     this.unsubscribe();
     this.parts.link.setLeaseRule(() => false);
-    for (const cancel of Object.values(this.timers)) cancel?.();
+    this.timers.close();
     this.inbox.length = 0;
   }
 
@@ -204,7 +219,7 @@ export class RunDriver {
   }
 
   private now(): Instant {
-    return { utcMs: this.parts.clock.utcMs(), uS: 0.001 };
+    return { utcMs: this.parts.clock.utcMs(), uS: SERVER_U_S };
   }
 
   private enqueue(item: Item): void {
@@ -215,43 +230,38 @@ export class RunDriver {
 
   private async pump(): Promise<void> {
     this.pumping = true;
-    for (let item = this.inbox.shift(); item !== undefined; item = this.inbox.shift()) {
-      if (item === 'beat') this.beat();
-      else if (item === 'alive') await this.saveAlive();
-      else await this.take(item);
+    try {
+      for (let item = this.inbox.shift(); item !== undefined; item = this.inbox.shift()) {
+        if (item === 'beat') this.beat();
+        else if (item === 'alive') await this.saveAlive();
+        else await this.take(item);
+      }
+    } catch (error) {
+      this.breakOff(error);
     }
     this.pumping = false;
     for (const resolve of this.waiting.splice(0)) resolve();
   }
 
+  /** What the loop cannot deal with: motion ends, and the next process takes the run up from what was saved. */
+  private breakOff(error: unknown): void {
+    this.stale = true;
+    this.outside(() => this.parts.link.send({ kind: 'hold', id: `${this.runId}-broken` }));
+    this.close();
+    this.parts.onError?.(error);
+  }
+
   private async take({ event, done }: Exclude<Item, string>): Promise<void> {
-    const result = this.advanceSafely(event);
+    const result = advanceSafely(this.parts.start, this.snapshot, event);
     const halted = event.type === 'hold' || event.type === 'stop';
     if (result.snapshot.context !== this.snapshot.context || result.snapshot.state !== this.snapshot.state) await this.saveThenAct(result, halted);
     else if (halted) this.halting -= 1;
     done?.(this.stale || this.closed ? null : result);
   }
 
-  /** A fault in the chart itself must not leave a rig in motion: the run fails and a stop goes out. */
-  private advanceSafely(event: RunEvent): Advance {
-    try {
-      return advance(this.parts.start, this.snapshot, event);
-    } catch (error) {
-      const reason = { code: 'defect', text: `The run engine met a fault of its own and stopped the run: ${error instanceof Error ? error.message : String(error)}` };
-      const context = { ...this.snapshot.context, reason, endedAtUtcMs: event.at.utcMs, deadlineUtcMs: null, ahead: null };
-      const id = `${this.runId}-fault-${context.commandCount}`;
-      return {
-        snapshot: { version: CHART_VERSION, state: 'failed', context },
-        steps: [],
-        events: [{ at: event.at, kind: 'failed', data: { code: reason.code, reason: reason.text } }],
-        effects: [{ kind: 'link', id, command: { kind: 'stop', id, releaseDrivers: false } }],
-      };
-    }
-  }
-
   private async saveThenAct(result: Advance, halted: boolean): Promise<void> {
     const events = this.chainOn(result.events);
-    const saved = await this.save(result.snapshot, { steps: result.steps, events });
+    const saved = await this.save(result.snapshot, { steps: result.steps, events, toPerform: result.effects.filter(isOwn) });
     if (halted) this.halting -= 1;
     if (!saved) return;
     this.snapshot = result.snapshot;
@@ -272,9 +282,9 @@ export class RunDriver {
     });
   }
 
-  private async save(snapshot: RunSnapshot, changed: { steps: StepRow[]; events: ChainedEvent[] }): Promise<boolean> {
+  private async save(snapshot: RunSnapshot, { toPerform, ...changed }: { steps: StepRow[]; events: ChainedEvent[]; toPerform: OwnEffect[] }): Promise<boolean> {
     const { start, clock } = this.parts;
-    const stored: StoredSnapshot = { ...snapshot, aliveUtcMs: clock.utcMs() };
+    const stored: StoredSnapshot = { ...snapshot, aliveUtcMs: clock.utcMs(), toPerform };
     const summary = summaryOf(snapshot, this.predict(snapshot, clock.utcMs()));
     try {
       const saved = await this.saver.save({
@@ -297,7 +307,7 @@ export class RunDriver {
   }
 
   private performEffect(effect: Effect): void {
-    if (effect.kind !== 'link') return this.parts.perform(effect);
+    if (effect.kind !== 'link') return this.outside(() => this.parts.perform(effect));
     const { command } = effect;
     const startsMotion = command.kind === 'home' || command.kind === 'move';
     if (startsMotion && (this.halting > 0 || this.databaseAwaySinceUtcMs !== null)) return;
@@ -325,45 +335,18 @@ export class RunDriver {
 
   private beat(): void {
     this.lastBeatMs = this.parts.clock.monotonicMs();
-    delete this.timers.beat;
-    this.scheduleBeat();
-  }
-
-  private scheduleBeat(): void {
-    if (this.timers.beat !== undefined || !wantsMotion(this.snapshot) || this.closed) return;
-    this.timers.beat = this.parts.clock.after(BEAT_MS, () => this.enqueue('beat'));
+    if (wantsMotion(this.snapshot)) this.timers.awaitBeat();
   }
 
   private armTimers(): void {
-    this.lastBeatMs = this.parts.clock.monotonicMs();
-    this.scheduleBeat();
-    this.timers.deadline?.();
-    delete this.timers.deadline;
-    const deadlineUtcMs = deadlineOf(this.snapshot);
-    if (deadlineUtcMs !== null && !this.closed) this.waitFor(deadlineUtcMs);
-  }
-
-  private waitFor(deadlineUtcMs: number): void {
-    const { clock } = this.parts;
-    const leftMs = deadlineUtcMs - clock.utcMs();
-    this.timers.deadline = clock.after(Math.min(leftMs, LONGEST_WAIT_MS), () => {
-      if (deadlineUtcMs - clock.utcMs() > 0.5) this.waitFor(deadlineUtcMs);
-      else this.enqueue({ event: { type: 'deadline', at: { utcMs: Math.max(clock.utcMs(), deadlineUtcMs), uS: 0.001 } } });
-    });
-  }
-
-  private scheduleAlive(): void {
-    this.timers.alive = this.parts.clock.after(ALIVE_MS, () => {
-      if (this.isOver() || this.closed) return;
-      this.enqueue('alive');
-      this.scheduleAlive();
-    });
+    this.beat();
+    this.timers.awaitDeadline(deadlineOf(this.snapshot));
   }
 
   /** So that a restart knows how long nobody drove the run. */
   private async saveAlive(): Promise<void> {
     if (this.isOver() || this.parts.clock.monotonicMs() - this.savedMs < ALIVE_MS / 2) return;
-    await this.save(this.snapshot, { steps: [], events: [] });
+    await this.save(this.snapshot, { steps: [], events: [], toPerform: [] });
     this.reportOutage();
   }
 
@@ -376,13 +359,24 @@ export class RunDriver {
   private finish(): void {
     this.unsubscribe();
     this.parts.link.setLeaseRule(() => false);
-    for (const cancel of Object.values(this.timers)) cancel?.();
+    this.timers.close();
+  }
+
+  /** Others' errors are theirs: the run goes on. */
+  private outside(call: () => void): void {
+    try {
+      call();
+    } catch (error) {
+      this.parts.onError?.(error);
+    }
   }
 
   private tell(change: RunChange): void {
-    for (const listener of this.listeners) listener(change);
+    for (const listener of this.listeners) this.outside(() => listener(change));
   }
 }
+
+const isOwn = (effect: Effect): effect is OwnEffect => effect.kind !== 'link';
 
 function snapshotIn(stored: StoredRun): RunSnapshot {
   const { version, state, context } = stored.snapshot as StoredSnapshot;

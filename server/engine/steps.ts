@@ -151,7 +151,7 @@ export function beginHome(draft: Draft, item: PlannedItem): void {
   const durationMs = 1000 * homeDurationS(start.rig, context.moment.angleDeg);
   const row = newRow(draft, { item, station: stationAt(start.rig, motionLimits.homeDeg), endUtcMs: context.moment.utcMs + durationMs });
   const commandId = draft.command((id) => ({ kind: 'home', id }));
-  const motion = { commandId, targetDeg: null, startUtcMs: null, durationMs: homeLimitMs(motionLimits), late: false, began: false, ended: false };
+  const motion = { commandId, targetDeg: null, startUtcMs: null, durationMs: homeLimitMs(motionLimits), late: false, began: false, reached: false };
   draft.openStep({ item, row, plannedMs: null, motion, broken: false });
   context.swingStartUtcMs = null;
   context.deadlineUtcMs = draft.nowUtcMs + motion.durationMs + MOTION_GRACE_MS;
@@ -212,7 +212,7 @@ export function openSwing(draft: Draft, { item, commandId, startUtcMs, late }: S
   const move = swingMove(item.step as SwingStep, draft.start.rig, context.moment.angleDeg);
   const durationMs = 1000 * move.durationS;
   const row = newRow(draft, { item, station: move.station, endUtcMs: context.moment.utcMs + durationMs });
-  const motion: Motion = { commandId, targetDeg: move.targetDeg, startUtcMs, durationMs, late, began: false, ended: false };
+  const motion: Motion = { commandId, targetDeg: move.targetDeg, startUtcMs, durationMs, late, began: false, reached: false };
   draft.openStep({ item, row, plannedMs: durationMs, motion, broken: false });
 }
 

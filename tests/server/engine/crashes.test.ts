@@ -77,6 +77,22 @@ describe('a crash at any transition of a run', () => {
   });
 });
 
+test('the end of an arm that was saved and not yet told is told by the next process', async () => {
+  const bench = makeBench();
+  bench.driver.start();
+  await bench.pass(30);
+  bench.store.fault = (write) => {
+    if ((write.snapshot as { context: { armVoid: string | null } }).context.armVoid !== null) bench.driver.close();
+    return 'none';
+  };
+  bench.link.openInterlock();
+  await bench.pass(1);
+  expect(bench.performed.filter(({ kind }) => kind === 'void-arm')).toEqual([]);
+  bench.store.fault = () => 'none';
+  await bench.restart(5);
+  expect(bench.performed.filter(({ kind }) => kind === 'void-arm')).toEqual([expect.objectContaining({ reason: 'the interlock was opened' })]);
+});
+
 type Deed =
   | { kind: 'pass'; seconds: number }
   | { kind: 'hold' | 'stop' | 'resume' | 'hold-after-dwell' | 'open' | 'close' | 'reset' | 'refuse' }

@@ -110,6 +110,31 @@ export class FakeLink implements TurntableLink {
     this.endMotion('interlock');
   }
 
+  loseSupply(): void {
+    this.supplyPresent = false;
+    this.endMotion('supply');
+    this.angleDeg = null;
+    this.say({ kind: 'supply', at: this.at(), present: false });
+  }
+
+  returnSupply(): void {
+    this.supplyPresent = true;
+    this.say({ kind: 'supply', at: this.at(), present: true });
+  }
+
+  /** The motion that is going on ends here and now. */
+  endAt(cause: MotionEndCause): void {
+    this.endMotion(cause);
+  }
+
+  tellArmKey(on: boolean): void {
+    this.say({ kind: 'arm-key', at: this.at(), on });
+  }
+
+  tellLeaseLapsed(): void {
+    this.say({ kind: 'lease-lapsed', at: this.at() });
+  }
+
   edge(angleDeg: number, direction: 'ccw' | 'cw'): void {
     this.say({ kind: 'edge', at: this.at(), angleDeg, direction });
   }

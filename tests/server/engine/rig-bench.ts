@@ -97,6 +97,8 @@ export interface Bench {
   driver: RunDriver;
   start: RunStart;
   performed: Effect[];
+  /** Errors the driver reported. */
+  errors: unknown[];
   arm: { now: Arm | null };
   /** Lets virtual time go by. */
   pass(seconds: number, until?: () => boolean): Promise<void>;
@@ -109,14 +111,16 @@ export function makeBench(start: RunStart = runStart()): Bench {
   const link = new FakeLink(clock);
   const store = new MemoryStore(start);
   const performed: Effect[] = [];
+  const errors: unknown[] = [];
   const arm = { now: start.arm };
-  const parts = (stored: StoredRun | null): RunDriverParts => ({ start, stored, store, link, clock, sha256, armNow: () => arm.now, perform: (effect) => performed.push(effect) });
+  const parts = (stored: StoredRun | null): RunDriverParts => ({ start, stored, store, link, clock, sha256, armNow: () => arm.now, perform: (effect) => performed.push(effect), onError: (error) => errors.push(error) });
   const bench: Bench = {
     clock,
     link,
     store,
     start,
     performed,
+    errors,
     arm,
     driver: new RunDriver(parts(null)),
     pass: (seconds, until) => clock.advance(1000 * seconds, until),

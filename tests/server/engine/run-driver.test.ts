@@ -88,6 +88,21 @@ describe('hold', () => {
     expect((dwell?.endUtcMs ?? 0) - (late?.startUtcMs ?? 0)).toBeCloseTo(840_000, 3);
   });
 
+  test('in homing closes the row as cut short; resume homes again', async () => {
+    const bench = makeBench();
+    bench.link.angleDeg = 12;
+    bench.driver.start();
+    await bench.pass(5);
+    expect(bench.driver.state().state).toBe('homing');
+    bench.driver.hold('Ben');
+    await bench.pass(1);
+    expect(brief(bench)).toEqual(['home cut short']);
+    await bench.driver.resume('Ben');
+    await bench.pass(400);
+    expect(bench.driver.facts().state).toBe('finished');
+    expect(brief(bench).slice(0, 3)).toEqual(['home cut short', 'home done', 'swing done']);
+  });
+
   test('a hold that overtakes a move which is being saved: the move is never sent', async () => {
     const bench = await underWay(5);
     let overtaken = false;
