@@ -14,7 +14,7 @@ export class LinkWatch {
 
   constructor(
     private readonly bench: LinkBench,
-    epoch: number,
+    private readonly epoch: number,
   ) {
     this.link = createLink({ factory: bench.factory, clock: bench.clock, rig: benchRig, epoch });
     this.link.setLeaseRule(() => this.mayRenew);
@@ -32,7 +32,7 @@ export class LinkWatch {
 
   send(command: (id: string) => LinkCommand): string {
     this.count += 1;
-    const id = `command-${this.count}`;
+    const id = `command-${this.epoch}-${this.count}`;
     this.link.send(command(id));
     return id;
   }
