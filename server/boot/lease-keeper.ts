@@ -31,7 +31,10 @@ export class LeaseKeeper {
 
   constructor(private readonly parts: LeaseParts) {}
 
-  epochOf(rig: RigKey): number | null {
+  /** The epoch under which this process drives a rig, taken now where nobody has it; null while another process drives it. */
+  async epochOf(rig: RigKey): Promise<number | null> {
+    const held = this.epochs.get(rig.rigId);
+    if (held === undefined && !this.closed) await this.tryTake(rig);
     return this.epochs.get(rig.rigId)?.epoch ?? null;
   }
 

@@ -23,7 +23,7 @@ export interface StationsParts {
   /** Samples of a channel are stored at most this often, ms; 0: as they come. */
   paceMs: number;
   /** The epoch under which this process drives a rig; null while another process holds its lease. */
-  epochOf(rig: { labId: string; rigId: string }): number | null;
+  epochOf(rig: { labId: string; rigId: string }): Promise<number | null>;
   /** The turntable and pendulum of a simulated rig; the same for as long as the rig exists. */
   apparatusOf(rig: StationRig): SimulatedApparatus;
   /** What the controller of a rig says, whether or not a run listens. */
@@ -52,7 +52,7 @@ export class ServerRigStations implements RigStations {
     await this.closeOne(rig.id);
     const { clock, log } = this.parts;
     const { motion } = rig.document;
-    const epoch = this.parts.epochOf({ labId: rig.labId, rigId: rig.id });
+    const epoch = await this.parts.epochOf({ labId: rig.labId, rigId: rig.id });
     if (motion === undefined || epoch === null) {
       log.warn({ rigId: rig.id }, motion === undefined ? 'the rig has no motion data and is not driven' : 'another server drives the rig');
       return;

@@ -1,0 +1,161 @@
+import { demoIds } from '@/db/demo/seed';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import { databaseOfThisFile } from '@/tests/support/database';
+import { LabServer } from '@/tests/support/lab-server';
+
+const database = databaseOfThisFile();
+let lab: LabServer;
+beforeAll(async () => {
+  lab = await LabServer.start(database());
+}, 60_000);
+afterAll(() => lab.stop());
+
+const rigs = `/labs/${demoIds.lab}/rigs`;
+const rig = `${rigs}/${demoIds.rig}`;
+const hour = 3_600_000;
+const inHours = (hours: number) => new Date(lab.clock.utcMs() + hours * hour).toISOString();
+const arm = (body: object) => lab.as('operator', 'POST', `${rig}/arm`).send({ name: 'Ilse Marrowby', cautionsRead: true, ...body });
+const armOf = async () => (await lab.as('viewer', 'GET', rig).expect(200)).body.arm;
+const auditKinds = async () => (await lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`).expect(200)).body.items.map(({ kind }: { kind: string }) => kind);
+
+describe('a rig', () => {
+  test('shows its line, its turntable and its mass sets', async () => {
+    const { body } = await lab.as('viewer', 'GET', rig).expect(200);
+    expect(body).toMatchObject({
+      name: 'North bench', revision: 1, link: { kind: 'simulated' }, arm: null, activeRun: null,
+      live: { condition: 'ready', positionKnown: true, angleDeg: 0, moving: false, interlockClosed: true, supplyPresent: true, discardedLines: 0 },
+    });
+    expect(Math.abs(Date.parse(body.live.lastReplyAt) - lab.clock.utcMs())).toBeLessThan(2000);
+    expect(body.massSets.map(({ label }: { label: string }) => label)).toEqual(['Lead spheres, 1.6 kg', 'Empty control']);
+  });
+
+  test('gets a new revision; earlier ones stay, and whoever edits an old one is told who was faster', async () => {
+    const before = await lab.as('keeper', 'GET', rig).expect(200);
+    const revise = (etag: string, reason: string) => lab.as('keeper', 'PUT', `${rig}/document`).set('If-Match', etag).send({ name: 'North bench', document: { ...demoRigWide, noise: { readout_rad: 2e-5 } }, reason });
+    const after = await revise(before.headers.etag as string, 'New camera').expect(200);
+    expect(after.body).toMatchObject({ revision: 2, document: { noise: { readout_rad: 2e-5 } } });
+    const late = await revise(before.headers.etag as string, 'Another camera').expect(412);
+    expect(late.body.detail).toContain('Casimir Thornquist made revision 2 of North bench after you opened it ("New camera"');
+    const all = await lab.as('viewer', 'GET', `${rig}/revisions`).expect(200);
+    expect(all.body.items.map(({ number, reason }: { number: number; reason: string }) => [number, reason])).toEqual([[2, 'New camera'], [1, 'First measurement of the rig']]);
+    expect(all.body.items[1].document).toEqual(demoRigWide);
+    await lab.advance(5_000);
+    expect((await lab.as('viewer', 'GET', rig)).body.live.condition).toBe('ready');
+  });
+
+  test('is added with its first mass set and a line of its own, which fills a channel', async () => {
+    const made = await lab.as('keeper', 'POST', rigs).send({ name: 'South bench', document: demoRigWide, link: { kind: 'simulated' } }).expect(201);
+    expect(made.body.massSets).toHaveLength(1);
+    // The lease of a rig that is added to a running server is taken at once.
+    await lab.advance(40_000);
+    const { body } = await lab.as('viewer', 'GET', `${rigs}/${made.body.id}`).expect(200);
+    expect(body.live.condition).toBe('ready');
+    const channels = await lab.as('viewer', 'GET', `${rigs}/${made.body.id}/channels`).expect(200);
+    expect(channels.body.items).toMatchObject([{ name: 'deflection', unit: 'rad', role: 'deflection', source: 'simulated' }]);
+    expect(await auditKinds()).toContain('rig.added');
+  });
+
+  test('takes mass sets with labels of their own', async () => {
+    const add = (label: string) => lab.as('keeper', 'POST', `${rig}/mass-sets`).send({ label, sources: { shape: 'none' } });
+    await add('Bare').expect(201);
+    expect((await add('Bare').expect(409)).body.detail).toContain('a mass set called "Bare" already');
+    expect((await lab.as('keeper', 'POST', `${rig}/mass-sets`).send({ label: 'Half', sources: { shape: 'sphere' } }).expect(400)).body.errors.map(({ path }: { path: string }) => path)).toEqual(['sources.mass', 'sources.radius', 'sources.orbit']);
+  });
+});
+
+describe('the line', () => {
+  test.each([
+    ['/dev/null', 'not a pseudo-terminal'],
+    ['/dev/ttyUSB0', 'not a pseudo-terminal'],
+  ])('at %s is refused as not built yet', async (path, words) => {
+    const answer = await lab.as('keeper', 'PUT', `${rig}/link`).send({ kind: 'serial', path }).expect(422);
+    expect(answer.body).toMatchObject({ code: 'not-yet', detail: expect.stringContaining(words) });
+    expect((await lab.as('viewer', 'GET', rig)).body.link).toEqual({ kind: 'simulated' });
+  });
+
+  test('that leads nowhere is tried and explained', async () => {
+    const answer = lab.as('keeper', 'POST', `${rig}/link/try`).send({ kind: 'serial', path: '/tmp/no-turntable-here' }).expect(200).then(({ body }) => body as unknown);
+    for (let turn = 0; turn < 200; turn += 1) await lab.advance(100);
+    expect(await answer).toEqual({ ok: false, detail: expect.stringContaining('There is no port /tmp/no-turntable-here'), firmware: null });
+  });
+});
+
+describe('arming', () => {
+  test('names who answers for the rig, until when, and that the cautions were read', async () => {
+    const answer = await arm({ until: inHours(16), note: 'Door closed' }).expect(201);
+    expect(answer.body).toMatchObject({ name: 'Ilse Marrowby', until: inHours(16), from: inHours(0), note: 'Door closed' });
+    expect(await armOf()).toEqual(answer.body);
+    await lab.as('operator', 'DELETE', `${rig}/arm`).expect(204);
+    expect(await armOf()).toBeNull();
+    await lab.services.idle();
+    expect(await auditKinds()).toEqual(expect.arrayContaining(['rig.armed', 'rig.arm-ended']));
+  });
+
+  test('lasts 72 h at most and ends by itself', async () => {
+    expect((await arm({ until: inHours(72.1) }).expect(400)).body.detail).toContain('more than 72 h ahead');
+    expect((await arm({ until: inHours(-1) }).expect(400)).body.detail).toContain('past');
+    expect((await arm({ until: inHours(1), cautionsRead: false }).expect(400)).body.errors[0].path).toBe('cautionsRead');
+    await arm({ until: inHours(0.02) }).expect(201);
+    await lab.advance(0.021 * hour);
+    expect(await armOf()).toBeNull();
+  });
+
+  test.each([
+    ['the interlock opens', () => lab.world.controller(demoIds.rig).openInterlock(), () => lab.world.controller(demoIds.rig).closeInterlock(), 'interlock'],
+    ['the motor supply is lost', () => lab.world.controller(demoIds.rig).loseSupply(), () => lab.world.controller(demoIds.rig).returnSupply(), 'supply'],
+    ['the controller restarts', () => lab.world.controller(demoIds.rig).reset(), () => undefined, 'controller'],
+  ])('is void when %s', async (_, happen, undo, word) => {
+    await arm({ until: inHours(2) }).expect(201);
+    happen();
+    await lab.advance(10_000);
+    expect(await armOf()).toBeNull();
+    const ended = (await lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`)).body.items.find(({ kind }: { kind: string }) => kind === 'rig.arm-ended');
+    expect(ended).toMatchObject({ who: 'the run engine', data: { why: expect.stringContaining(word) } });
+    undo();
+    await lab.advance(5_000);
+  });
+
+  test('is refused while the interlock is open', async () => {
+    lab.world.controller(demoIds.rig).openInterlock();
+    await lab.advance(2_000);
+    expect((await arm({ until: inHours(2) }).expect(409)).body).toMatchObject({ code: 'not-ready', detail: expect.stringContaining('interlock of North bench is open') });
+    lab.world.controller(demoIds.rig).closeInterlock();
+    await lab.advance(2_000);
+  });
+});
+
+describe('start checks', () => {
+  const checks = async (query = `protocolId=${demoIds.shortProtocol}&revision=1`) => (await lab.as('viewer', 'GET', `${rig}/start-checks?${query}`).expect(200)).body;
+  const stateOf = async (code: string) => (await checks()).checks.find((check: { code: string }) => check.code === code);
+
+  test('say what is missing and when the run would finish', async () => {
+    await lab.advance(40_000);
+    const report = await checks();
+    expect(report.mayStart).toBe(false);
+    expect(report.checks.filter(({ state }: { state: string }) => state === 'fail').map(({ code }: { code: string }) => code)).toEqual(['armed']);
+    // home, then 6 x (far, near) at a beat of 2 periods of 420 s and the settling swing: 12 x 840 s and little more
+    expect(report.durationS).toBeGreaterThan(12 * 840);
+    expect(report.durationS).toBeLessThan(12 * 840 + 60);
+    expect(Date.parse(report.finishAt) - lab.clock.utcMs()).toBeCloseTo(1000 * report.durationS, -2);
+    expect(report.firstMove).toContain('home');
+  });
+
+  test('want an arm beyond the predicted finish', async () => {
+    await arm({ until: inHours(1) }).expect(201);
+    expect(await stateOf('armed')).toMatchObject({ state: 'fail', detail: expect.stringContaining('arm it for longer') });
+    await arm({ until: inHours(4) }).expect(201);
+    expect((await checks()).mayStart).toBe(true);
+  });
+
+  test('notice that the deflection has stopped', async () => {
+    await database().connection.pool.query('delete from samples');
+    expect(await stateOf('data')).toMatchObject({ state: 'fail', detail: 'The channel deflection has no sample yet.' });
+    await lab.advance(40_000);
+    expect(await stateOf('data')).toMatchObject({ state: 'pass' });
+  });
+
+  test('of a revision that is not there', async () => {
+    await lab.as('viewer', 'GET', `${rig}/start-checks?protocolId=${demoIds.shortProtocol}&revision=7`).expect(404);
+    await lab.as('viewer', 'GET', `${rig}/start-checks?protocolId=${demoIds.shortProtocol}`).expect(400);
+  });
+});
