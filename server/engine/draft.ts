@@ -94,8 +94,12 @@ export class Draft {
   saveRow(row: StepRow): void {
     const { steps } = this.out;
     const last = steps.at(-1);
-    if (last === undefined || last.seq < row.seq) steps.push(structuredClone(row));
-    else steps[steps.findIndex(({ seq }) => seq === row.seq)] = structuredClone(row);
+    if (last === undefined || last.seq < row.seq) {
+      steps.push(structuredClone(row));
+      return;
+    }
+    const index = steps.findIndex(({ seq }) => seq >= row.seq);
+    steps.splice(index, steps[index]?.seq === row.seq ? 1 : 0, structuredClone(row));
   }
 
   /** Makes `step` the present one and opens its row, whose sequence number is given here. */
