@@ -8,3 +8,10 @@ export interface ArchiveWarning {
   code: string;
   message: string;
 }
+
+/** An archive while it is verified: what is found is added to the warnings. */
+export interface ArchiveInHand {
+  files: ArchiveFiles;
+  sha256: Sha256OfBytes;
+  warnings: ArchiveWarning[];
+}

@@ -34,8 +34,9 @@ export interface Archive {
 export function readArchive(files: ArchiveFiles, sha256: Sha256OfBytes): Archive {
   const descriptor = readPackage(files);
   const warnings: ArchiveWarning[] = [];
-  verifyFiles(descriptor, files, sha256, warnings);
-  const chain = verifyEvents(files, sha256, warnings);
+  const inHand = { files, sha256, warnings };
+  verifyFiles(descriptor, inHand);
+  const chain = verifyEvents(inHand);
   const rig = readJson(files, 'rig.json', rigDocumentSchema);
   const steps = readSteps(requiredText(files, stepsFile));
   const { protocol, registered } = readProtocol(files, warnings);

@@ -1,5 +1,5 @@
 import * as z from 'zod';
-import type { ArchiveFiles, ArchiveWarning, Sha256OfBytes } from './archive-types';
+import type { ArchiveFiles, ArchiveInHand } from './archive-types';
 import { verifyChain } from './chain';
 import type { ChainedEvent } from './run-records';
 import { UnusableArchive } from './unusable-archive';
@@ -29,7 +29,7 @@ const textOf = (content: Uint8Array | string) => (typeof content === 'string' ? 
  * Follows the event chain and holds it against run.json and the hashes of its last event, `archived`.
  * @throws UnusableArchive naming the `seq` at which the chain breaks, or the file that is not the archived one.
  */
-export function verifyEvents(files: ArchiveFiles, sha256: Sha256OfBytes, warnings: ArchiveWarning[]): ArchiveChain {
+export function verifyEvents({ files, sha256, warnings }: ArchiveInHand): ArchiveChain {
   const content = files.get(eventsFile);
   const claimed = claimedByRun(files);
   if (content === undefined) {
@@ -48,7 +48,7 @@ export function verifyEvents(files: ArchiveFiles, sha256: Sha256OfBytes, warning
   if (claimed !== undefined && claimed.head.toLowerCase() !== check.head.hash) {
     throw new UnusableArchive({ file: runFile }, `events.head is not the hash of the last event, seq ${check.head.seq}`);
   }
-  verifyArchived(events.at(-1), files, sha256, warnings);
+  verifyArchived(events.at(-1), { files, sha256, warnings });
   return { events: check.events, valid: true };
 }
 
@@ -88,7 +88,7 @@ function readEvents(text: string): ChainedEvent[] {
 }
 
 /** The event `archived` names files with their SHA-256, under `files` or directly, with or without a leading `sha256:`. */
-function verifyArchived(last: ChainedEvent | undefined, files: ArchiveFiles, sha256: Sha256OfBytes, warnings: ArchiveWarning[]): void {
+function verifyArchived(last: ChainedEvent | undefined, { files, sha256, warnings }: ArchiveInHand): void {
   if (last?.kind !== 'archived') {
     warnings.push({
       code: 'no-archived-event',

@@ -1,5 +1,5 @@
 import * as z from 'zod';
-import type { ArchiveFiles, ArchiveWarning, Sha256OfBytes } from './archive-types';
+import type { ArchiveFiles, ArchiveInHand } from './archive-types';
 import { UnusableArchive } from './unusable-archive';
 
 const packageFile = 'datapackage.json';
@@ -65,7 +65,7 @@ function parse(content: Uint8Array | string): unknown {
  * Holds every listed file against its size and SHA-256; files without them are accepted with the warning `no-hashes`.
  * @throws UnusableArchive naming the file that is missing or was changed.
  */
-export function verifyFiles(descriptor: PackageDescriptor, files: ArchiveFiles, sha256: Sha256OfBytes, warnings: ArchiveWarning[]): void {
+export function verifyFiles(descriptor: PackageDescriptor, { files, sha256, warnings }: ArchiveInHand): void {
   const unchecked: string[] = [];
   for (const resource of descriptor.resources) {
     const content = files.get(resource.path);

@@ -51,15 +51,20 @@ export function budgetOf(question: BudgetQuestion): Budget {
   return { lines, u, degreesOfFreedom: effectiveDegreesOfFreedom(joined) };
 }
 
-function term(input: string, known: Known, sensitivity: number, group: string | null = null): Term {
+function term(input: string, known: Known & { group?: string | undefined }, sensitivity: number): Term {
   const signed = sensitivity * known.u;
-  return { line: { input, value: known.value, u: known.u, sensitivity, contribution: Math.abs(signed) }, signed, nu: known.nu, group };
+  return {
+    line: { input, value: known.value, u: known.u, sensitivity, contribution: Math.abs(signed) },
+    signed,
+    nu: known.nu,
+    group: known.group ?? null,
+  };
 }
 
 function rigTerms({ rig, gOf, stations, lever }: BudgetQuestion): Term[] {
   return budgetInputs(rig, { stations, lever }).map(({ path, quantity, shifted }) => {
     const sensitivity = derivative((step) => gOf({ rig: shifted(step) }), derivativeStep(quantity));
-    return term(path, { value: quantity.value, u: quantity.u, nu: quantity.nu ?? Infinity }, sensitivity, quantity.group ?? null);
+    return term(path, { value: quantity.value, u: quantity.u, nu: quantity.nu ?? Infinity, group: quantity.group }, sensitivity);
   });
 }
 

@@ -165,7 +165,7 @@ function motion(
     const move = course.moves.findLast((one) => one.startS <= tS);
     return move === undefined ? (anglesDeg[0] as number) : angleAt(move, tS, course.limits);
   };
-  const found = integrate(plan, rig, angleDegAt, course.endS);
+  const found = integrate(plan, rig, { angleDegAt, endS: course.endS });
   motions.set(key, found);
   return found;
 }
@@ -205,12 +205,7 @@ function rowsOf(move: Move, plan: NightPlan, seq: number): StepRow[] {
   return rows.map((row) => ({ ...row, ...plan.row?.(row) }));
 }
 
-function integrate(
-  plan: NightPlan,
-  rig: RigDocument,
-  angleDegAt: (tS: number) => number,
-  endS: number,
-): { utcMs: Float64Array; theta: Float64Array } {
+function integrate(plan: NightPlan, rig: RigDocument, { angleDegAt, endS }: { angleDegAt: (tS: number) => number; endS: number }): Motion {
   const { pendulum } = rig;
   const inertia =
     2 * pendulum.ballMass.value * (pendulum.arm.value ** 2 + 0.4 * pendulum.ballRadius.value ** 2) +

@@ -70,7 +70,7 @@ describe('the sensitivities', () => {
     ['pendulum.beamLength', (r: RigDocument, h: number) => (r.pendulum.beamLength.value += h), 1e-4, 3e-4],
     ['lever.distance', (r: RigDocument, h: number) => ((r.lever as { distance: { value: number } }).distance.value += h), 1e-3, 3e-4],
     ['lever.zero', (r: RigDocument, h: number) => ((r.lever as { zero: { value: number } }).zero.value += h), 1e-3, 2e-2],
-  ])('to %s is what a whole new evaluation of the same data gives', (input, change, h, tolerance) => {
+  ])('to %s is what a whole new evaluation of the same data gives', (...[input, change, h, tolerance]) => {
     // No measured period: κ comes from the ring-down alone, so its correction for the sources' stiffness is part of the derivative.
     const rig = withRig(closeRig(), (r) => {
       delete r.measured;

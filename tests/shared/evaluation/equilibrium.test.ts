@@ -71,7 +71,7 @@ describe('whatever the channel', () => {
     ['mm', 1e3, -77.3, 1],
     ['m', 1, -0.0031, -1],
     ['mm', 1e3, 901, -1],
-  ] as const)('a spot position in %s (scale %d, zero %d, sense %d)', (unit, perMetre, zero, sense) => {
+  ] as const)('a spot position in %s (scale %d, zero %d, sense %d)', (...[unit, perMetre, zero, sense]) => {
     const rig = withRig(wideRig(), (r) => (r.lever = { distance: { value: 5, u: 0, unit: 'm' }, fold: 2, sense }));
     const { result } = evaluateNight({ ...wideNight, rig, unit, reading: (angle) => zero + perMetre * sense * 5 * Math.tan(2 * angle) });
     expect(relativeDifference(result.G?.value ?? NaN, trueG)).toBeLessThan(1e-7);

@@ -234,7 +234,7 @@ describe('the channel', () => {
       'the channel "tilt" has the role environment',
     ],
     ['at all', withChannels(renamed('tilt', 'environment')), {}, 'no channel with the role deflection'],
-  ])('one %s is refused', (_what, input, options, message) => {
+  ])('one %s is refused', (...[, input, options, message]) => {
     expect(() => evaluateRecords(input, options)).toThrow(message);
   });
 
