@@ -20,17 +20,18 @@ interface Key {
 function useListKeys(acted: () => void): (event: Key) => void {
   const editor = useEditor();
   const { document, selected, mayWrite } = editor;
-  const step = (by: number) => {
+  const choose = (row: (at: number, last: number) => number) => {
     const rows = rowPaths(document);
+    const last = rows.length - 1;
     const at = rows.findIndex((path) => samePath(path, selected));
-    const next = rows[at === -1 ? (by > 0 ? 0 : rows.length - 1) : Math.min(rows.length - 1, Math.max(0, at + by))];
+    const next = rows[Math.min(last, Math.max(0, row(at, last)))];
     if (next !== undefined) editor.select(next);
   };
   const plain: Record<string, () => void> = {
-    ArrowDown: () => step(1),
-    ArrowUp: () => step(-1),
-    Home: () => step(-Infinity),
-    End: () => step(Infinity),
+    ArrowDown: () => choose((at) => at + 1),
+    ArrowUp: () => choose((at, last) => (at === -1 ? last : at - 1)),
+    Home: () => choose(() => 0),
+    End: () => choose((_, last) => last),
     Enter: () => (selected === null ? undefined : editor.openDetails(selected)),
     Escape: () => editor.select(null),
     ...(mayWrite ? { Delete: editor.remove, Backspace: editor.remove } : {}),
@@ -62,9 +63,13 @@ export function StepList() {
   const key = selected?.join('.') ?? '';
   useEffect(() => {
     const list = host.current as unknown as HTMLElement | null;
-    if (key === '' || list === null || !byKey.current) return;
+    const row = key === '' ? null : list?.querySelector<HTMLElement>(`[data-path="${key}"]`);
+    if (row == null) return;
+    // What was moved, doubled or chosen in the strip must not stay out of sight below the fold.
+    row.scrollIntoView?.({ block: 'nearest' });
+    if (!byKey.current) return;
     byKey.current = false;
-    list.querySelector<HTMLElement>(`[data-path="${key}"]`)?.focus();
+    row.focus();
   }, [key, document]);
   if (document.steps.length === 0) {
     return (
