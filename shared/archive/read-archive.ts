@@ -8,7 +8,7 @@ import type { ChannelInfo, ChannelSeries, StepRow } from './run-records';
 import { readSteps, stepsFile } from './step-csv';
 import { UnusableArchive } from './unusable-archive';
 import { readPackage, verifyFiles, type PackageDescriptor, type ResourceDescriptor } from './verify-package';
-import { verifyEvents, type ArchiveChain } from './verify-events';
+import { verifyArchived, verifyEvents, type ArchiveChain } from './verify-events';
 
 /** A verified archive. Channels are read when asked for, so that a night's environment costs nothing to the evaluation. */
 export interface Archive {
@@ -35,8 +35,10 @@ export function readArchive(files: ArchiveFiles, sha256: Sha256OfBytes): Archive
   const descriptor = readPackage(files);
   const warnings: ArchiveWarning[] = [];
   const inHand = { files, sha256, warnings };
+  // The chain comes first: when an event was changed it says which, the file's hash only that one was.
+  const verified = verifyEvents(inHand);
   verifyFiles(descriptor, inHand);
-  const chain = verifyEvents(inHand);
+  verifyArchived(verified, inHand);
   const rig = readJson(files, 'rig.json', rigDocumentSchema);
   const steps = readSteps(requiredText(files, stepsFile));
   const { protocol, registered } = readProtocol(files, warnings);
@@ -48,7 +50,7 @@ export function readArchive(files: ArchiveFiles, sha256: Sha256OfBytes): Archive
     protocol,
     registered,
     exclusions,
-    chain,
+    chain: { events: verified.events, valid: verified.valid },
     warnings,
     channels: resources.map(({ info }) => info),
     readChannel: (name) => {

@@ -25,18 +25,23 @@ const runSchema = z.looseObject({ events: z.looseObject({ count: z.number().int(
 
 const textOf = (content: Uint8Array | string) => (typeof content === 'string' ? content : new TextDecoder().decode(content));
 
+/** The chain as found, with its last event for `verifyArchived`. */
+export interface VerifiedChain extends ArchiveChain {
+  last: ChainedEvent | undefined;
+}
+
 /**
- * Follows the event chain and holds it against run.json and the hashes of its last event, `archived`.
- * @throws UnusableArchive naming the `seq` at which the chain breaks, or the file that is not the archived one.
+ * Follows the event chain and holds it against run.json.
+ * @throws UnusableArchive naming the `seq` at which the chain breaks.
  */
-export function verifyEvents({ files, sha256, warnings }: ArchiveInHand): ArchiveChain {
+export function verifyEvents({ files, sha256, warnings }: ArchiveInHand): VerifiedChain {
   const content = files.get(eventsFile);
   const claimed = claimedByRun(files);
   if (content === undefined) {
     if (claimed !== undefined)
       throw new UnusableArchive({ file: eventsFile }, `the file is missing, although run.json counts ${claimed.count} events`);
     warnings.push({ code: 'no-chain', message: 'The archive holds no events.jsonl: nothing shows that its records are complete.' });
-    return { events: 0, valid: null };
+    return { events: 0, valid: null, last: undefined };
   }
   const events = readEvents(textOf(content));
   const check = verifyChain(events, sha256);
@@ -48,8 +53,7 @@ export function verifyEvents({ files, sha256, warnings }: ArchiveInHand): Archiv
   if (claimed !== undefined && claimed.head.toLowerCase() !== check.head.hash) {
     throw new UnusableArchive({ file: runFile }, `events.head is not the hash of the last event, seq ${check.head.seq}`);
   }
-  verifyArchived(events.at(-1), { files, sha256, warnings });
-  return { events: check.events, valid: true };
+  return { events: check.events, valid: true, last: events.at(-1) };
 }
 
 function claimedByRun(files: ArchiveFiles): { count: number; head: string } | undefined {
@@ -87,8 +91,12 @@ function readEvents(text: string): ChainedEvent[] {
   return events;
 }
 
-/** The event `archived` names files with their SHA-256, under `files` or directly, with or without a leading `sha256:`. */
-function verifyArchived(last: ChainedEvent | undefined, { files, sha256, warnings }: ArchiveInHand): void {
+/**
+ * The last event, `archived`, names files with their SHA-256, under `files` or directly, with or without a leading `sha256:`.
+ * @throws UnusableArchive naming the file that is not the archived one.
+ */
+export function verifyArchived({ valid, last }: VerifiedChain, { files, sha256, warnings }: ArchiveInHand): void {
+  if (valid === null) return;
   if (last?.kind !== 'archived') {
     warnings.push({
       code: 'no-archived-event',

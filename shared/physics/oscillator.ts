@@ -27,7 +27,7 @@ export function inertiaKgM2(rig: RigDocument): number {
 }
 
 /** Oscillator with inertia (kg m2), damped period (s) and decay time (s); κ = I (ω_d² + γ²). */
-export function oscillator(inertia: number, periodS: number, decayTimeS: number): Oscillator {
+function oscillator(inertia: number, periodS: number, decayTimeS: number): Oscillator {
   const omegaD = (2 * Math.PI) / periodS;
   const gamma = 1 / decayTimeS;
   const omega0 = Math.hypot(omegaD, gamma);

@@ -68,7 +68,7 @@ function ringDownDerivatives(tS: Float64Array, at: { omega: number; slope: numbe
   ];
 }
 
-export function mean(values: ArrayLike<number>): number {
+function mean(values: ArrayLike<number>): number {
   let sum = 0;
   for (let i = 0; i < values.length; i += 1) sum += values[i] as number;
   return sum / values.length;

@@ -6,7 +6,7 @@ import { wideRig } from './reference-rigs';
 
 const startUtcMs = Date.UTC(2026, 2, 1, 22, 0, 0);
 
-export function stepRow(seq: number, changes: Partial<StepRow> = {}): StepRow {
+function stepRow(seq: number, changes: Partial<StepRow> = {}): StepRow {
   const at = startUtcMs + seq * 100_000;
   return {
     seq,
