@@ -1,14 +1,16 @@
 import 'uplot/dist/uPlot.min.css';
-import { useEffect, useMemo, useRef, useState } from 'react';
+import { useCallback, useEffect, useMemo, useRef, useState } from 'react';
 import { View } from 'react-native';
 import { useTheme } from '@/components/theme';
 import { IconButton, Label, Num } from '@/components/ui';
 import { formatReading } from '@/shared/lib/format-angle';
 import { formatClock, zoneName } from '@/shared/lib/format-time';
 import { extent, valueAt } from './curve';
-import { panned, zoomed, type DeflectionPlotProps, type TimeSpan } from './deflection-plot-types';
+import { panned, zoomed, type DeflectionPlotProps, type StepBand, type TimeSpan } from './deflection-plot-types';
 import { HiddenTable } from './hidden-table';
 import { useCanvasPlot } from './use-canvas-plot';
+
+const noBands: readonly StepBand[] = [];
 
 /** Many points on a canvas: drag or arrow keys to move, pinch, wheel, + and − or the buttons to zoom, a cursor that reads out. */
 export function DeflectionPlot(props: DeflectionPlotProps) {
@@ -18,17 +20,38 @@ export function DeflectionPlot(props: DeflectionPlotProps) {
   const from = props.whole?.from ?? utcMs[0] ?? 0;
   const to = Math.max(from + 1, props.whole?.to ?? utcMs[utcMs.length - 1] ?? 1);
   const whole = useMemo<TimeSpan>(() => ({ from, to }), [from, to]);
-  const [span, setSpan] = useState<TimeSpan>(whole);
+  const [chosen, setChosen] = useState<TimeSpan | null>(null);
+  const inside = chosen !== null && chosen.from >= whole.from && chosen.to <= whole.to;
+  const span = inside ? chosen : whole;
+  const setSpan = useCallback((change: (before: TimeSpan) => TimeSpan) => setChosen((before) => change(before ?? whole)), [whole]);
   const [cursor, setCursor] = useState<number | null>(null);
-  useEffect(() => setSpan((before) => (before.from >= whole.from && before.to <= whole.to && before.to - before.from > 1 ? before : whole)), [whole]);
-  useEffect(() => onWindow?.(span.from, span.to), [span, onWindow]);
-  useCanvasPlot({ host, utcMs, value, unit, timeZone, heightPx, bands: bands ?? [], colors, span, whole, onSpan: setSpan, onCursor: setCursor });
+  const { from: shownFrom, to: shownTo } = span;
+  useEffect(() => onWindow?.(shownFrom, shownTo), [shownFrom, shownTo, onWindow]);
+  useCanvasPlot({
+    host,
+    utcMs,
+    value,
+    unit,
+    timeZone,
+    heightPx,
+    bands: bands ?? noBands,
+    colors,
+    span,
+    whole,
+    onSpan: setSpan,
+    onCursor: setCursor,
+  });
 
   const middle = (span.from + span.to) / 2;
   const zoom = (factor: number) => setSpan((before) => zoomed(before, whole, { at: cursor ?? middle, factor }));
   const pan = (share: number) => setSpan((before) => panned(before, whole, (before.to - before.from) * share));
   const keys: Record<string, () => void> = {
-    ArrowLeft: () => pan(-0.2), ArrowRight: () => pan(0.2), '+': () => zoom(0.5), '=': () => zoom(0.5), '-': () => zoom(2), Home: () => setSpan(whole),
+    ArrowLeft: () => pan(-0.2),
+    ArrowRight: () => pan(0.2),
+    '+': () => zoom(0.5),
+    '=': () => zoom(0.5),
+    '-': () => zoom(2),
+    Home: () => setChosen(null),
   };
   const shownAll = span.from <= whole.from && span.to >= whole.to;
   return (
@@ -38,7 +61,7 @@ export function DeflectionPlot(props: DeflectionPlotProps) {
         <View className="flex-row">
           <IconButton icon="minus" label="Show a longer time" onPress={() => zoom(2)} disabled={shownAll} />
           <IconButton icon="plus" label="Show a shorter time" onPress={() => zoom(0.5)} />
-          <IconButton icon="repeat" label="Show all" onPress={() => setSpan(whole)} disabled={shownAll} />
+          <IconButton icon="repeat" label="Show all" onPress={() => setChosen(null)} disabled={shownAll} />
         </View>
       </View>
       <div
@@ -59,7 +82,13 @@ export function DeflectionPlot(props: DeflectionPlotProps) {
   );
 }
 
-function Readout({ utcMs, value, unit, timeZone, cursor }: Pick<DeflectionPlotProps, 'utcMs' | 'value' | 'unit' | 'timeZone'> & { cursor: number | null }) {
+function Readout({
+  utcMs,
+  value,
+  unit,
+  timeZone,
+  cursor,
+}: Pick<DeflectionPlotProps, 'utcMs' | 'value' | 'unit' | 'timeZone'> & { cursor: number | null }) {
   if (cursor === null) return <Label className="shrink">{`Times in ${zoneName(timeZone)}`}</Label>;
   const reading = valueAt({ x: utcMs, y: value }, cursor);
   return (
@@ -71,7 +100,14 @@ function Readout({ utcMs, value, unit, timeZone, cursor }: Pick<DeflectionPlotPr
 }
 
 /** Least and greatest in twelve parts of the shown time: what a listener can take in. */
-function PlotTable({ utcMs, value, unit, timeZone, title, span }: Pick<DeflectionPlotProps, 'utcMs' | 'value' | 'unit' | 'timeZone' | 'title'> & { span: TimeSpan }) {
+function PlotTable({
+  utcMs,
+  value,
+  unit,
+  timeZone,
+  title,
+  span,
+}: Pick<DeflectionPlotProps, 'utcMs' | 'value' | 'unit' | 'timeZone' | 'title'> & { span: TimeSpan }) {
   const rows = useMemo(() => {
     const length = (span.to - span.from) / 12;
     return Array.from({ length: 12 }, (_, index) => {

@@ -39,8 +39,14 @@ export function FitPlot({ curve, rangeMrad }: FitPlotProps) {
   const residualUrad = curve.dataRad.map((y, index) => (y - (curve.modelRad[index] as number)) * 1e6);
   const x: [number, number] = [Math.min(0, minutes[0] ?? 0), minutes.at(-1) ?? 1];
   const reach = Math.max(1e-3, ...residualUrad.map(Math.abs)) * 1.15;
-  const main = { box: { left, top, width: width - left - 8, height: mainPx }, scale: { x, y: rangeMrad ?? roomy([...dataMrad, ...modelMrad]) } };
-  const rest = { box: { left, top: top + mainPx + betweenPx, width: width - left - 8, height: residualPx }, scale: { x, y: [-reach, reach] as [number, number] } };
+  const main = {
+    box: { left, top, width: width - left - 8, height: mainPx },
+    scale: { x, y: rangeMrad ?? roomy([...dataMrad, ...modelMrad]) },
+  };
+  const rest = {
+    box: { left, top: top + mainPx + betweenPx, width: width - left - 8, height: residualPx },
+    scale: { x, y: [-reach, reach] as [number, number] },
+  };
   const rms = formatSignificant(residualRms(curve) * 1e6, 2);
   const title = `Dwell ${curve.seq} at ${curve.station}: fit to ${curve.tS.length} bins over ${formatDuration(curve.tS.at(-1) ?? 0)}, residual ${rms} µrad rms.`;
   return (

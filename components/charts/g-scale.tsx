@@ -30,9 +30,19 @@ export function GScale({ value, u, codata, other }: GScaleProps) {
   const from = middle - half - reach / 4;
   const to = middle + half + reach / 4;
   const x = (g: number) => edgePx + ((g - from) / (to - from)) * (width - 2 * edgePx);
-  const ticks = niceTicks(from * 1e11, to * 1e11, width < 420 ? 3 : 6);
+  const ticks = niceTicks(from * 1e11, to * 1e11, width < 420 ? 4 : 6);
   const band = (k: number, opacity: number, height: number) =>
-    u === null ? null : <Rect x={x(value - k * u)} width={Math.max(1, x(value + k * u) - x(value - k * u))} y={axisY - height / 2} height={height} rx={height / 2} fill={colors.lamp} opacity={opacity} />;
+    u === null ? null : (
+      <Rect
+        x={x(value - k * u)}
+        width={Math.max(1, x(value + k * u) - x(value - k * u))}
+        y={axisY - height / 2}
+        height={height}
+        rx={height / 2}
+        fill={colors.lamp}
+        opacity={opacity}
+      />
+    );
   const reference = other ?? { value: codata.value, label: 'CODATA' };
   const onRight = x(reference.value) < width * 0.7;
   const label = `G is ${spokenUncertain({ value, u })}; the recommended value is ${spokenUncertain({ value: codata.value, u: codata.u })}${other ? `; ${other.label} is ${spokenUncertain({ value: other.value, u: 0 })}` : ''}.`;
@@ -41,12 +51,25 @@ export function GScale({ value, u, codata, other }: GScaleProps) {
       <Svg width={width} height={heightPx} viewBox={`0 0 ${width} ${heightPx}`} aria-hidden>
         <Line x1={edgePx} x2={width - edgePx} y1={axisY} y2={axisY} stroke={colors.faint} strokeWidth={1.5} />
         {ticks.values.map((tick) => (
-          <SvgTick key={tick} x={x(tick / 1e11)} text={formatFixed(tick, { decimals: Math.max(2, ticks.decimals) })} color={colors.dim} line={colors.faint} />
+          <SvgTick
+            key={tick}
+            x={x(tick / 1e11)}
+            text={formatFixed(tick, { decimals: Math.max(2, ticks.decimals) })}
+            color={colors.dim}
+            line={colors.faint}
+          />
         ))}
         {band(2, 0.22, 12)}
         {band(1, 0.45, 12)}
         <Line x1={x(reference.value)} x2={x(reference.value)} y1={axisY - 17} y2={axisY + 10} stroke={colors.text} strokeWidth={2.5} />
-        <SvgText x={x(reference.value) + (onRight ? 6 : -6)} y={axisY - 13} textAnchor={onRight ? 'start' : 'end'} fill={colors.dim} fontSize={13} fontFamily="Atkinson Hyperlegible Next">
+        <SvgText
+          x={x(reference.value) + (onRight ? 6 : -6)}
+          y={axisY - 13}
+          textAnchor={onRight ? 'start' : 'end'}
+          fill={colors.dim}
+          fontSize={13}
+          fontFamily="Atkinson Hyperlegible Next"
+        >
           {reference.label}
         </SvgText>
         <Circle cx={x(value)} cy={axisY} r={6} fill={colors.lamp} stroke={colors.panel} strokeWidth={2} />

@@ -48,7 +48,13 @@ export function planLayout(rig: RigDocument): PlanLayout {
     ballRadius: Math.max(0.045, pendulum.ballRadius.value * scale),
     hasSources: sources.shape !== 'none',
     ticks: [...seen.values()],
-    keepOut: (rig.motion?.keepOut ?? []).flatMap(([from, to]) => [[from, to], [from + 180, to + 180]] as [number, number][]),
+    keepOut: (rig.motion?.keepOut ?? []).flatMap(
+      ([from, to]) =>
+        [
+          [from, to],
+          [from + 180, to + 180],
+        ] as [number, number][],
+    ),
   };
 }
 

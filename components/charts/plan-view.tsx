@@ -30,17 +30,30 @@ export function PlanView({ rig, angleDeg, sizePx, old = false }: PlanViewProps) 
   };
   const dot = { x: scale, y: scale };
   return (
-    <View role="img" aria-label={planWords(rig, angleDeg, old)} style={{ width: sizePx, height: sizePx, opacity: old ? 0.45 : 1 }} testID="plan-view">
+    <View
+      role="img"
+      aria-label={planWords(rig, angleDeg, old)}
+      style={{ width: sizePx, height: sizePx, opacity: old ? 0.45 : 1 }}
+      testID="plan-view"
+    >
       <Svg width={sizePx} height={sizePx} viewBox={`0 0 ${sizePx} ${sizePx}`} aria-hidden>
         <Circle cx={scale} cy={scale} r={layout.orbit * scale} fill="none" stroke={colors.line} strokeWidth={Math.max(2, sizePx / 70)} />
         {layout.keepOut.map(([from, to]) => (
           <Path key={from} d={arc(px, layout.orbit, [from, to])} stroke={colors.danger} strokeWidth={4} strokeDasharray="3 3" fill="none" />
         ))}
         {layout.ticks.map((tick) => (
-          <Tick key={`${tick.name} ${tick.angleDeg}`} lane={tick.lane} from={px(layout.orbit * 0.94, tick.angleDeg)} to={px(layout.orbit * 1.06, tick.angleDeg)} color={colorOf(tick.lane, colors)} />
+          <Tick
+            key={`${tick.name} ${tick.angleDeg}`}
+            lane={tick.lane}
+            from={px(layout.orbit * 0.94, tick.angleDeg)}
+            to={px(layout.orbit * 1.06, tick.angleDeg)}
+            color={colorOf(tick.lane, colors)}
+          />
         ))}
         <Arm layout={layout} colors={colors} scale={scale} />
-        {shownDeg === null || !layout.hasSources ? null : <Sources layout={layout} px={px} angleDeg={shownDeg} scale={scale} color={sourceColor(rig, angleDeg, colors)} />}
+        {shownDeg === null || !layout.hasSources ? null : (
+          <Sources layout={layout} px={px} angleDeg={shownDeg} scale={scale} color={sourceColor(rig, angleDeg, colors)} />
+        )}
         <Circle cx={dot.x} cy={dot.y} r={3} fill={colors.lamp} />
       </Svg>
     </View>
@@ -50,7 +63,9 @@ export function PlanView({ rig, angleDeg, sizePx, old = false }: PlanViewProps) 
 type ToPx = (radius: number, deg: number) => { x: number; y: number };
 
 function Tick({ lane, from, to, color }: { lane: Lane; from: { x: number; y: number }; to: { x: number; y: number }; color: string }) {
-  return <Line x1={from.x} y1={from.y} x2={to.x} y2={to.y} stroke={color} strokeWidth={lane === 'other' ? 1.5 : 3.5} strokeLinecap="round" />;
+  return (
+    <Line x1={from.x} y1={from.y} x2={to.x} y2={to.y} stroke={color} strokeWidth={lane === 'other' ? 1.5 : 3.5} strokeLinecap="round" />
+  );
 }
 
 function Arm({ layout, colors, scale }: { layout: PlanLayout; colors: ThemeColors; scale: number }) {
@@ -93,6 +108,7 @@ function arc(px: ToPx, radius: number, [fromDeg, toDeg]: [number, number]): stri
 export function planWords(rig: RigDocument, angleDeg: number | null, old = false): string {
   const keepOut = (rig.motion?.keepOut ?? []).map(([from, to]) => `${formatDegrees(from, 0)} to ${formatDegrees(to, 0)}`).join(', ');
   const station = angleDeg === null ? null : stationNear(rig, angleDeg);
-  const where = angleDeg === null ? 'angle not known' : `at ${formatDegrees(angleDeg)}${station === null ? ', between stations' : `, ${station}`}`;
+  const where =
+    angleDeg === null ? 'angle not known' : `at ${formatDegrees(angleDeg)}${station === null ? ', between stations' : `, ${station}`}`;
   return `Turntable from above, ${old ? 'last known ' : ''}${where}${keepOut === '' ? '' : `; kept out: ${keepOut}`}.`;
 }

@@ -20,9 +20,26 @@ export const StripDrawing = memo(function StripDrawing({ layout, widthPx, height
     <Svg width={widthPx} height={heightPx} viewBox={`0 0 ${widthPx} ${heightPx}`} aria-hidden>
       {mini ? null : layout.swings.map((swing) => <SwingLine key={swing.key} swing={swing} colors={colors} />)}
       {layout.equilibria.map(({ x1, x2, y, planned }) => (
-        <Line key={`${x1} ${y}`} x1={x1} x2={x2} y1={y} y2={y} stroke={colors.dim} strokeWidth={1} strokeDasharray="2 4" opacity={planned ? 0.6 : 0.95} />
+        <Line
+          key={`${x1} ${y}`}
+          x1={x1}
+          x2={x2}
+          y1={y}
+          y2={y}
+          stroke={colors.dim}
+          strokeWidth={1}
+          strokeDasharray="2 4"
+          opacity={planned ? 0.6 : 0.95}
+        />
       ))}
-      <Path d={pathOf(layout.predicted)} stroke={colors.text} strokeWidth={layout.onlyPlanned ? line : line * 0.85} fill="none" opacity={future} strokeLinejoin="round" />
+      <Path
+        d={pathOf(layout.predicted)}
+        stroke={colors.text}
+        strokeWidth={layout.onlyPlanned ? line : line * 0.85}
+        fill="none"
+        opacity={future}
+        strokeLinejoin="round"
+      />
       <Path d={pathOf(layout.measured)} stroke={colors.text} strokeWidth={line} fill="none" strokeLinejoin="round" strokeLinecap="round" />
       {layout.blocks.map((block) => (
         <Block key={block.key} block={block} colors={colors} mini={mini} faded={block.phase === 'planned' && !layout.onlyPlanned} />
@@ -40,7 +57,18 @@ export const StripDrawing = memo(function StripDrawing({ layout, widthPx, height
 function SwingLine({ swing, colors }: { swing: StripSwing; colors: ThemeColors }) {
   const { x1, y1, x2, y2, planned, selected } = swing;
   const stroke = selected ? colors.lamp : colors.faint;
-  return <Line x1={x1} y1={y1} x2={x2} y2={y2} stroke={stroke} strokeWidth={selected ? 3 : 1} opacity={planned && !selected ? 0.35 : 0.7} strokeLinecap="round" />;
+  return (
+    <Line
+      x1={x1}
+      y1={y1}
+      x2={x2}
+      y2={y2}
+      stroke={stroke}
+      strokeWidth={selected ? 3 : 1}
+      opacity={planned && !selected ? 0.35 : 0.7}
+      strokeLinecap="round"
+    />
+  );
 }
 
 interface BlockProps {
@@ -59,13 +87,32 @@ function Block({ block, colors, mini, faded }: BlockProps) {
     <G>
       <G opacity={faded ? 0.45 : 1}>
         <Rect
-          x={hollow ? x + 0.75 : x} y={hollow ? y + 0.75 : y} width={Math.max(0.5, hollow ? width - 1.5 : width)} height={hollow ? height - 1.5 : height} rx={radius}
-          fill={color} fillOpacity={hollow ? 0.22 : 1} stroke={hollow ? color : 'none'} strokeWidth={hollow ? 1.5 : 0} strokeDasharray={cutShort ? '3 2' : undefined}
+          x={hollow ? x + 0.75 : x}
+          y={hollow ? y + 0.75 : y}
+          width={Math.max(0.5, hollow ? width - 1.5 : width)}
+          height={hollow ? height - 1.5 : height}
+          rx={radius}
+          fill={color}
+          fillOpacity={hollow ? 0.22 : 1}
+          stroke={hollow ? color : 'none'}
+          strokeWidth={hollow ? 1.5 : 0}
+          strokeDasharray={cutShort ? '3 2' : undefined}
         />
         {bad && !mini && width >= 8 ? <Path d={crossOf(block)} stroke={colors.danger} strokeWidth={2} strokeLinecap="round" /> : null}
         {block.marked && !bad ? <Path d={markOf(block)} fill={hollow ? color : colors.ink} /> : null}
       </G>
-      {selected ? <Rect x={x + 1} y={y + 1} width={Math.max(1, width - 2)} height={Math.max(1, height - 2)} rx={radius} fill="none" stroke={colors.text} strokeWidth={2.5} /> : null}
+      {selected ? (
+        <Rect
+          x={x + 1}
+          y={y + 1}
+          width={Math.max(1, width - 2)}
+          height={Math.max(1, height - 2)}
+          rx={radius}
+          fill="none"
+          stroke={colors.text}
+          strokeWidth={2.5}
+        />
+      ) : null}
     </G>
   );
 }

@@ -97,7 +97,9 @@ export function nowWindow(steps: readonly StripStep[], nowUtcMs: number, beats =
 
 function rangeOf(input: StripInput): [number, number] | null {
   const { fromUtcMs, toUtcMs } = input.window;
-  const spans = [input.measured, input.predicted, input.equilibrium].flatMap((series) => (series ? [extent(series, fromUtcMs, toUtcMs)] : [])).filter((span) => span !== null);
+  const spans = [input.measured, input.predicted, input.equilibrium]
+    .flatMap((series) => (series ? [extent(series, fromUtcMs, toUtcMs)] : []))
+    .filter((span) => span !== null);
   if (spans.length === 0) return null;
   const least = Math.min(...spans.map(([low]) => low));
   const greatest = Math.max(...spans.map(([, high]) => high));
@@ -124,8 +126,18 @@ function blocksOf(input: StripInput, xToPx: (utcMs: number) => number): StripBlo
       const width = Math.max(MIN_BLOCK_PX, right - left - spacing);
       const height = stand.lane === 'other' ? otherPx : lanePx;
       return {
-        key: stand.keys[0] as string, keys: stand.keys, lane: stand.lane, x: left, y: laneY(stand.lane, input) - height / 2, width, height, phase: stand.phase,
-        measured: stand.measured, bad: stand.good === false, cutShort: stand.cutShort, selected: selectedKey != null && stand.keys.includes(selectedKey),
+        key: stand.keys[0] as string,
+        keys: stand.keys,
+        lane: stand.lane,
+        x: left,
+        y: laneY(stand.lane, input) - height / 2,
+        width,
+        height,
+        phase: stand.phase,
+        measured: stand.measured,
+        bad: stand.good === false,
+        cutShort: stand.cutShort,
+        selected: selectedKey != null && stand.keys.includes(selectedKey),
         marked: stand.lane !== 'other' && width >= MARK_ROOM_PX && lanePx >= 12,
       };
     });
@@ -142,8 +154,13 @@ function swingsOf(input: StripInput, xToPx: (utcMs: number) => number): StripSwi
     if (step.endUtcMs < window.fromUtcMs || step.startUtcMs > window.toUtcMs) continue;
     const inward = (of: Lane) => laneY(of, input) + (of === 'near' ? lanePx / 2 : of === 'far' ? -lanePx / 2 : 0);
     swings.push({
-      key: step.key, x1: xToPx(step.startUtcMs), y1: inward(from), x2: xToPx(step.endUtcMs), y2: inward(lane),
-      planned: step.phase === 'planned', selected: input.selectedKey === step.key,
+      key: step.key,
+      x1: xToPx(step.startUtcMs),
+      y1: inward(from),
+      x2: xToPx(step.endUtcMs),
+      y2: inward(lane),
+      planned: step.phase === 'planned',
+      selected: input.selectedKey === step.key,
     });
   }
   return swings;

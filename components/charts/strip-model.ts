@@ -110,8 +110,15 @@ export function standsOf(steps: readonly StripStep[]): Stand[] {
       previous.keys.push(step.key);
     } else {
       stands.push({
-        lane: laneOf(step.station), station: step.station, startUtcMs: step.startUtcMs, endUtcMs: step.endUtcMs, phase: step.phase, measured,
-        good: step.good, cutShort: step.outcome === 'cut short', keys: [step.key],
+        lane: laneOf(step.station),
+        station: step.station,
+        startUtcMs: step.startUtcMs,
+        endUtcMs: step.endUtcMs,
+        phase: step.phase,
+        measured,
+        good: step.good,
+        cutShort: step.outcome === 'cut short',
+        keys: [step.key],
       });
     }
   }

@@ -57,7 +57,11 @@ export function SwingStrip(props: SwingStripProps) {
   );
   return (
     <View onLayout={onLayout} className="w-full min-w-0" testID="swing-strip">
-      {onSelect === undefined ? picture : <Selectable {...{ title, steps, selectedKey, onSelect }} pxToX={layout.pxToX} picture={picture} />}
+      {onSelect === undefined ? (
+        picture
+      ) : (
+        <Selectable {...{ title, steps, selectedKey, onSelect }} pxToX={layout.pxToX} picture={picture} />
+      )}
       {mini || props.axis === false ? null : <Axis window={window} timeZone={timeZone} />}
       {mini ? null : <StripTable title={title} words={words} />}
     </View>
@@ -65,7 +69,8 @@ export function SwingStrip(props: SwingStripProps) {
 }
 
 function Axis({ window, timeZone }: { window: StripWindow; timeZone: string }) {
-  const clock = (utcMs: number) => formatClock(utcMs, { timeZone, precision: window.toUtcMs - window.fromUtcMs < 600_000 ? 'seconds' : 'short' });
+  const clock = (utcMs: number) =>
+    formatClock(utcMs, { timeZone, precision: window.toUtcMs - window.fromUtcMs < 600_000 ? 'seconds' : 'short' });
   return (
     <View className="flex-row items-baseline justify-between gap-2 pt-1.5" aria-hidden>
       <Label className="font-mono tabular">{clock(window.fromUtcMs)}</Label>
@@ -114,7 +119,13 @@ function Selectable({ title, steps, selectedKey, onSelect, pxToX, picture }: Sel
     },
   };
   return (
-    <Pressable role="button" aria-label={`${title}: choose a step, arrow keys move`} onPress={tapped} {...keys} style={{ cursor: 'pointer' }}>
+    <Pressable
+      role="button"
+      aria-label={`${title}: choose a step, arrow keys move`}
+      onPress={tapped}
+      {...keys}
+      style={{ cursor: 'pointer' }}
+    >
       {picture}
     </Pressable>
   );

@@ -14,7 +14,8 @@ export function niceStep(span: number, count: number): number {
 export function niceTicks(from: number, to: number, count: number): { values: number[]; decimals: number } {
   const step = niceStep(to - from, count);
   const values: number[] = [];
-  for (let index = Math.ceil(from / step - 1e-9); index * step <= to + step * 1e-9; index += 1) values.push(index * step === 0 ? 0 : index * step);
+  for (let index = Math.ceil(from / step - 1e-9); index * step <= to + step * 1e-9; index += 1)
+    values.push(index * step === 0 ? 0 : index * step);
   const twoDigits = Math.abs(step / 10 ** Math.floor(Math.log10(step)) - 2.5) < 1e-9;
   return { values, decimals: Math.max(0, -Math.floor(Math.log10(step) + 1e-9) + (twoDigits ? 1 : 0)) };
 }

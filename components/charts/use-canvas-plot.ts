@@ -1,4 +1,4 @@
-import { useEffect, useRef, type RefObject } from 'react';
+import { useEffect, useMemo, useRef, type RefObject } from 'react';
 import UPlot from 'uplot';
 import type { ThemeColors } from '@/components/theme';
 import { unitSign } from '@/shared/lib/format-number';
@@ -63,12 +63,22 @@ function drawBands(plot: UPlot, bands: readonly StepBand[], colors: ThemeColors)
     ctx.globalAlpha = band.good === false ? 0.3 : 1;
     ctx.fillRect(x1, near ? bbox.top : bbox.top + bbox.height - bandPx * ratio, Math.max(1, x2 - x1 - ratio), bandPx * ratio);
     ctx.globalAlpha = 1;
-    if (x2 - x1 > 16 * ratio) drawMark(ctx, { x: (x1 + x2) / 2, y: near ? bbox.top + (bandPx / 2) * ratio : bbox.top + bbox.height - (bandPx / 2) * ratio, half: 3.5 * ratio, up: near, color: colors.ink });
+    if (x2 - x1 > 16 * ratio)
+      drawMark(ctx, {
+        x: (x1 + x2) / 2,
+        y: near ? bbox.top + (bandPx / 2) * ratio : bbox.top + bbox.height - (bandPx / 2) * ratio,
+        half: 3.5 * ratio,
+        up: near,
+        color: colors.ink,
+      });
   }
   ctx.restore();
 }
 
-function drawMark(ctx: CanvasRenderingContext2D, { x, y, half, up, color }: { x: number; y: number; half: number; up: boolean; color: string }) {
+function drawMark(
+  ctx: CanvasRenderingContext2D,
+  { x, y, half, up, color }: { x: number; y: number; half: number; up: boolean; color: string },
+) {
   const tip = up ? -half * 0.8 : half * 0.8;
   ctx.fillStyle = color;
   ctx.beginPath();
@@ -78,22 +88,47 @@ function drawMark(ctx: CanvasRenderingContext2D, { x, y, half, up, color }: { x:
   ctx.fill();
 }
 
-function optionsOf(input: CanvasPlotInput, width: number): UPlot.Options {
-  const { colors, timeZone, unit, heightPx, onCursor } = input;
+function optionsOf(latest: RefObject<CanvasPlotInput>, width: number): UPlot.Options {
+  const input = latest.current;
+  const { colors, timeZone, unit, heightPx } = input;
   const axis = { stroke: colors.dim, grid: { stroke: colors.line, width: 1 }, ticks: { stroke: colors.line, width: 1, size: 4 } };
   const scaleOf = unit === 'rad' ? { factor: 1e3, sign: 'mrad' } : { factor: 1, sign: unitSign(unit) };
   return {
-    width, height: heightPx, ms: 1, legend: { show: false }, padding: [8, 22, 0, 0],
+    width,
+    height: heightPx,
+    ms: 1,
+    legend: { show: false },
+    padding: [8, 22, 0, 0],
     cursor: { drag: { x: false, y: false, setScale: false }, y: false, points: { size: 8, fill: colors.lamp, stroke: colors.lamp } },
-    scales: { x: { time: false, auto: false, min: input.span.from, max: input.span.to }, y: { auto: true, range: (_, least, greatest) => roomyRange(least, greatest) } },
+    scales: {
+      x: { time: false, auto: false, min: input.span.from, max: input.span.to },
+      y: { auto: true, range: (_, least, greatest) => roomyRange(least, greatest) },
+    },
     series: [{}, { stroke: colors.text, width: 1.5, points: { show: false }, spanGaps: false }],
     axes: [
-      { ...axis, font: font('Atkinson Hyperlegible Mono'), space: 84, values: (_, ticks) => ticks.map((at) => formatClock(at, { timeZone, precision: (ticks[1] ?? at) - (ticks[0] ?? at) < 60_000 ? 'seconds' : 'short' })), incrs: timeIncrements },
-      { ...axis, font: font('Atkinson Hyperlegible Mono'), size: 48, label: scaleOf.sign, labelFont: font('Atkinson Hyperlegible Next'), labelSize: 20, values: (_, ticks) => ticks.map((y) => String(Number((y * scaleOf.factor).toPrecision(6)))) },
+      {
+        ...axis,
+        font: font('Atkinson Hyperlegible Mono'),
+        space: 84,
+        values: (_, ticks) =>
+          ticks.map((at) => formatClock(at, { timeZone, precision: (ticks[1] ?? at) - (ticks[0] ?? at) < 60_000 ? 'seconds' : 'short' })),
+        incrs: timeIncrements,
+      },
+      {
+        ...axis,
+        font: font('Atkinson Hyperlegible Mono'),
+        size: 48,
+        label: scaleOf.sign,
+        labelFont: font('Atkinson Hyperlegible Next'),
+        labelSize: 20,
+        values: (_, ticks) => ticks.map((y) => String(Number((y * scaleOf.factor).toPrecision(6)))),
+      },
     ],
     hooks: {
-      drawClear: [(plot) => drawBands(plot, input.bands, colors)],
-      setCursor: [(plot) => onCursor(plot.cursor.left == null || plot.cursor.left < 0 ? null : plot.posToVal(plot.cursor.left, 'x'))],
+      drawClear: [(plot) => drawBands(plot, latest.current.bands, colors)],
+      setCursor: [
+        (plot) => latest.current.onCursor(plot.cursor.left == null || plot.cursor.left < 0 ? null : plot.posToVal(plot.cursor.left, 'x')),
+      ],
     },
   };
 }
@@ -109,41 +144,65 @@ function roomyRange(least: number | null, greatest: number | null): [number, num
 /** Draws on a canvas inside `host` and turns fingers, mouse and wheel into changes of the shown time. */
 export function useCanvasPlot(input: CanvasPlotInput): void {
   const { host, utcMs, value, heightPx, colors, bands, unit, timeZone, span } = input;
+  const data = useMemo(() => withGaps(utcMs, value), [utcMs, value]);
   const plot = useRef<UPlot | null>(null);
   const latest = useRef(input);
-  latest.current = input;
+  const latestData = useRef(data);
+  useEffect(() => {
+    latest.current = input;
+    latestData.current = data;
+  });
 
   useEffect(() => {
     const element = host.current;
     if (element === null) return undefined;
-    const made = new UPlot(optionsOf(latest.current, Math.max(200, element.clientWidth)), withGaps(utcMs, value), element);
+    const made = new UPlot(optionsOf(latest, Math.max(200, element.clientWidth)), latestData.current, element);
     plot.current = made;
     const stopGestures = gestures(made, latest);
-    const observer = typeof ResizeObserver === 'undefined' ? null : new ResizeObserver(() => made.setSize({ width: Math.max(200, element.clientWidth), height: heightPx }));
+    const observer =
+      typeof ResizeObserver === 'undefined'
+        ? null
+        : new ResizeObserver(() => made.setSize({ width: Math.max(200, element.clientWidth), height: heightPx }));
     observer?.observe(element);
     // A canvas neither asks for a font nor redraws by itself when it arrives.
-    void document.fonts?.load(font('Atkinson Hyperlegible Mono')).then(() => (plot.current === made ? made.redraw(false, true) : undefined));
+    void document.fonts
+      ?.load(font('Atkinson Hyperlegible Mono'))
+      .then(() => (plot.current === made ? made.redraw(false, true) : undefined));
     return () => {
       plot.current = null;
       observer?.disconnect();
       stopGestures();
       made.destroy();
     };
-  }, [host, utcMs, value, heightPx, colors, bands, unit, timeZone]);
+  }, [host, heightPx, colors, unit, timeZone]);
 
   useEffect(() => {
-    plot.current?.setScale('x', { min: span.from, max: span.to });
-  }, [span]);
+    const drawn = plot.current;
+    if (drawn === null) return;
+    drawn.batch(() => {
+      if (drawn.data !== (data as UPlot.AlignedData)) drawn.setData(data, false);
+      drawn.setScale('x', { min: span.from, max: span.to });
+    });
+  }, [span, data, bands]);
+}
+
+const tapPx = 8;
+
+function putCursor(plot: UPlot, { clientX, clientY }: { clientX: number; clientY: number }): void {
+  const { left, top } = plot.over.getBoundingClientRect();
+  plot.setCursor({ left: clientX - left, top: clientY - top });
 }
 
 /** One finger moves, two pinch, the wheel zooms; uPlot itself knows the mouse only. Vertical swipes still scroll the page. */
 function gestures(plot: UPlot, latest: RefObject<CanvasPlotInput>): () => void {
   const over = plot.over;
   const touches = new Map<number, number>();
+  let moved = 0;
   over.style.touchAction = 'pan-y';
   const valueAtX = (clientX: number) => plot.posToVal(clientX - over.getBoundingClientRect().left, 'x');
   const down = (event: PointerEvent) => {
     touches.set(event.pointerId, event.clientX);
+    moved = 0;
     over.setPointerCapture?.(event.pointerId);
   };
   const move = (event: PointerEvent) => {
@@ -152,6 +211,7 @@ function gestures(plot: UPlot, latest: RefObject<CanvasPlotInput>): () => void {
     const { onSpan, whole } = latest.current;
     const others = [...touches].filter(([id]) => id !== event.pointerId).map(([, x]) => x);
     touches.set(event.pointerId, event.clientX);
+    moved += Math.abs(event.clientX - before);
     if (others[0] === undefined) {
       const ms = valueAtX(before) - valueAtX(event.clientX);
       onSpan((span) => panned(span, whole, ms));
@@ -162,7 +222,11 @@ function gestures(plot: UPlot, latest: RefObject<CanvasPlotInput>): () => void {
     const at = valueAtX((event.clientX + others[0]) / 2);
     onSpan((span) => zoomed(span, whole, { at, factor }));
   };
-  const up = (event: PointerEvent) => touches.delete(event.pointerId);
+  const up = (event: PointerEvent) => {
+    touches.delete(event.pointerId);
+    // A finger has no resting place to hover at: a tap puts the cursor where it was.
+    if (event.type === 'pointerup' && event.pointerType !== 'mouse' && moved < tapPx) setTimeout(() => putCursor(plot, event), 0);
+  };
   const wheel = (event: WheelEvent) => {
     event.preventDefault();
     const { onSpan, whole } = latest.current;

@@ -1,7 +1,8 @@
 import { useEffect, useRef, useState } from 'react';
 import { deviceNowMs } from '@/components/api';
 
-const reducedMotion = (): boolean => typeof window !== 'undefined' && (window.matchMedia?.('(prefers-reduced-motion: reduce)').matches ?? false);
+const reducedMotion = (): boolean =>
+  typeof window !== 'undefined' && (window.matchMedia?.('(prefers-reduced-motion: reduce)').matches ?? false);
 
 /**
  * The angle between two reports, drawn on smoothly: reports come once a second, the table turns all the time. Under
@@ -12,7 +13,13 @@ export function useSmoothAngle(reportedDeg: number | null, reportMs = 1000): num
   const from = useRef(reportedDeg);
   useEffect(() => {
     const startDeg = from.current;
-    if (reportedDeg === null || startDeg === null || Math.abs(reportedDeg - startDeg) < 0.02 || reducedMotion() || typeof requestAnimationFrame !== 'function') {
+    if (
+      reportedDeg === null ||
+      startDeg === null ||
+      Math.abs(reportedDeg - startDeg) < 0.02 ||
+      reducedMotion() ||
+      typeof requestAnimationFrame !== 'function'
+    ) {
       from.current = reportedDeg;
       setShownDeg(reportedDeg);
       return undefined;

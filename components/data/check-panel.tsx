@@ -7,13 +7,16 @@ import { formatClock, formatDay, zoneName } from '@/shared/lib/format-time';
 /** What the whole file came to with this mapping: its span, or every problem by row and column. */
 export function CheckPanel({ check, timeZone }: { check: ImportCheck; timeZone: string }) {
   const rows = formatFixed(check.rows, { decimals: 0 });
-  const instant = (at: string) => `${formatDay(Date.parse(at), timeZone)} ${formatClock(Date.parse(at), { timeZone, precision: 'seconds' })}`;
+  const instant = (at: string) =>
+    `${formatDay(Date.parse(at), timeZone)} ${formatClock(Date.parse(at), { timeZone, precision: 'seconds' })}`;
   return (
     <Panel edge={check.ok ? 'good' : 'danger'} className="gap-3" testID="import-check">
       <View role={check.ok ? 'status' : 'alert'} className="flex-row items-center gap-2">
         <Icon name={check.ok ? 'passed' : 'failed'} tone={check.ok ? 'good' : 'danger'} />
         <Body strong className="shrink">
-          {check.ok ? `All ${rows} rows can be read.` : `${check.problemCount} problem${check.problemCount === 1 ? '' : 's'} in ${rows} rows. Nothing is stored until there are none.`}
+          {check.ok
+            ? `All ${rows} rows can be read.`
+            : `${check.problemCount} problem${check.problemCount === 1 ? '' : 's'} in ${rows} rows. Nothing is stored until there are none.`}
         </Body>
       </View>
       {check.firstAt === null || check.lastAt === null ? null : (

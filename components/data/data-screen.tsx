@@ -15,7 +15,12 @@ import { formatFixed } from '@/shared/lib/format-number';
 const points = 3000;
 
 function bandsOf(rows: readonly StepRowView[]): StepBand[] {
-  return standsOf(stepsOfLog(rows)).map(({ lane, startUtcMs, endUtcMs, good }) => ({ lane, fromUtcMs: startUtcMs, toUtcMs: endUtcMs, good }));
+  return standsOf(stepsOfLog(rows)).map(({ lane, startUtcMs, endUtcMs, good }) => ({
+    lane,
+    fromUtcMs: startUtcMs,
+    toUtcMs: endUtcMs,
+    good,
+  }));
 }
 
 /** The deflection of a run against the steps that moved the masses, as close as one likes. */
@@ -30,9 +35,19 @@ export function DataScreen() {
   return (
     <Screen title="Deflection data" back={{ href: `/runs/${runId}` as Href, label: 'the run' }} testID="data-screen">
       {whole.isPending ? <Loading label="Loading the data" /> : null}
-      {whole.isError ? <ProblemNotice title="The data could not be loaded" detail={wordsOf(whole.error).detail} action={{ label: 'Try again', onPress: () => void whole.refetch() }} /> : null}
+      {whole.isError ? (
+        <ProblemNotice
+          title="The data could not be loaded"
+          detail={wordsOf(whole.error).detail}
+          action={{ label: 'Try again', onPress: () => void whole.refetch() }}
+        />
+      ) : null}
       {whole.isSuccess && channels.length === 0 ? (
-        <Empty title="No deflection data" icon="runs" action={may.ok ? { label: 'Import a file', icon: 'import', onPress: toImport } : undefined}>
+        <Empty
+          title="No deflection data"
+          icon="runs"
+          action={may.ok ? { label: 'Import a file', icon: 'import', onPress: toImport } : undefined}
+        >
           {may.ok ? 'Bring in the readings of the balance as a text file; they are laid against the step log.' : may.why}
         </Empty>
       ) : null}
@@ -40,7 +55,13 @@ export function DataScreen() {
         <>
           {channels.length > 1 ? (
             <View className="wide:w-[320px]">
-              <Select label="Channel" value={channelId} options={channels.map(({ id, name, unit }) => ({ value: id, label: `${name}, ${unit}` }))} onChange={setChosen} testID="channel" />
+              <Select
+                label="Channel"
+                value={channelId}
+                options={channels.map(({ id, name, unit }) => ({ value: id, label: `${name}, ${unit}` }))}
+                onChange={setChosen}
+                testID="channel"
+              />
             </View>
           ) : null}
           <ChannelPlot key={channelId} runId={runId} channelId={channelId} />
@@ -82,17 +103,30 @@ function ChannelPlot({ runId, channelId }: { runId: string; channelId: string })
   const coarse = all.data?.data;
   const first = coarse?.utcMs[0];
   const last = coarse?.utcMs.at(-1);
-  const onWindow = useCallback((from: number, to: number) => setSpan(first !== undefined && last !== undefined && from <= first && to >= last ? '' : `${Math.floor(from)} ${Math.ceil(to)}`), [first, last]);
-  if (!coarse?.channel || first === undefined || last === undefined) return all.isPending ? <Loading label="Loading the data" /> : <Empty title="No samples in this run" />;
+  const onWindow = useCallback(
+    (from: number, to: number) =>
+      setSpan(first !== undefined && last !== undefined && from <= first && to >= last ? '' : `${Math.floor(from)} ${Math.ceil(to)}`),
+    [first, last],
+  );
+  if (!coarse?.channel || first === undefined || last === undefined)
+    return all.isPending ? <Loading label="Loading the data" /> : <Empty title="No samples in this run" />;
   const shown = detail.data?.data ?? coarse;
   return (
     <Panel className="gap-2" testID="channel-plot">
       <DeflectionPlot
-        utcMs={shown.utcMs} value={shown.value} unit={coarse.channel.unit} timeZone={timeZone} bands={bands} heightPx={wide ? 420 : 300} whole={{ from: first, to: last }} onWindow={onWindow}
+        utcMs={shown.utcMs}
+        value={shown.value}
+        unit={coarse.channel.unit}
+        timeZone={timeZone}
+        bands={bands}
+        heightPx={wide ? 420 : 300}
+        whole={{ from: first, to: last }}
+        onWindow={onWindow}
         title={`${coarse.channel.name} over the run, with the stands at near above and at far below`}
       />
       <Label>
-        {formatFixed(coarse.total, { decimals: 0 })} samples{coarse.total > coarse.utcMs.length ? '; least and greatest of each stretch are drawn, all of them when you look closer' : ''}.
+        {formatFixed(coarse.total, { decimals: 0 })} samples
+        {coarse.total > coarse.utcMs.length ? '; least and greatest of each stretch are drawn, all of them when you look closer' : ''}.
       </Label>
     </Panel>
   );

@@ -32,12 +32,24 @@ export function FileDrop({ onFile, busy }: FileDropProps) {
       className={`rounded-panel border-2 border-dashed p-5 ${over ? 'border-lamp bg-panel2' : 'border-line bg-panel'}`}
       data-testid="file-drop"
     >
-      <input ref={input} type="file" accept=".csv,.txt,.tsv,.dat,text/csv,text/plain" hidden aria-hidden tabIndex={-1} onChange={(event) => take(event.target.files)} data-testid="file-input" />
+      <input
+        ref={input}
+        type="file"
+        accept=".csv,.txt,.tsv,.dat,text/csv,text/plain"
+        hidden
+        aria-hidden
+        tabIndex={-1}
+        onChange={(event) => take(event.target.files)}
+        data-testid="file-input"
+      />
       <View className="items-center gap-3">
         <Icon name="import" size={28} tone="dim" />
         <Body className="text-center">A text file with a column of times and a column of deflection.</Body>
         <Button kind="primary" label="Choose a file" busy={busy} onPress={() => input.current?.click()} testID="choose-file" />
-        <Label className="text-center">{wide ? 'Or drop it here. ' : ''}Comma, semicolon, tab, bar or space; ISO 8601, epoch or elapsed seconds; rad, mrad, µrad, m or mm.</Label>
+        <Label className="text-center">
+          {wide ? 'Or drop it here. ' : ''}Comma, semicolon, tab, bar or space; ISO 8601, epoch or elapsed seconds; rad, mrad, µrad, m or
+          mm.
+        </Label>
       </View>
     </div>
   );

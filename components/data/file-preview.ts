@@ -12,5 +12,7 @@ export function previewRows(head: string, delimiter: ImportMapping['delimiter'])
 /** Names of the columns: of the first row where it holds names, else counted. */
 export function columnNames(rows: readonly string[][], headerRow: boolean): string[] {
   const count = rows.reduce((most, row) => Math.max(most, row.length), 0);
-  return Array.from({ length: count }, (_, index) => (headerRow ? rows[0]?.[index]?.trim() || `column ${index + 1}` : `column ${index + 1}`));
+  return Array.from({ length: count }, (_, index) =>
+    headerRow ? rows[0]?.[index]?.trim() || `column ${index + 1}` : `column ${index + 1}`,
+  );
 }

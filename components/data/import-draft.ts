@@ -30,7 +30,14 @@ export type ImportAction =
   | { kind: 'checked'; check: ImportCheck }
   | { kind: 'another-file' };
 
-export const noImport = (channelName: string): ImportState => ({ imported: null, draft: null, ambiguous: [], remembered: false, channelName, check: null });
+export const noImport = (channelName: string): ImportState => ({
+  imported: null,
+  draft: null,
+  ambiguous: [],
+  remembered: false,
+  channelName,
+  check: null,
+});
 
 export function importReducer(state: ImportState, action: ImportAction): ImportState {
   switch (action.kind) {
@@ -48,8 +55,15 @@ export function importReducer(state: ImportState, action: ImportAction): ImportS
 }
 
 const fieldWords: Record<MappingKey, string> = {
-  delimiter: 'what parts the columns', decimal: 'the decimal sign', headerRow: 'whether the first row holds names', timeColumn: 'the column of the time', timeFormat: 'how the time is written', elapsedFrom: 'when time 0 was',
-  timesWithoutZoneAreUtc: 'which zone the times are in', valueColumn: 'the column of the deflection', unit: 'the unit of the deflection',
+  delimiter: 'what parts the columns',
+  decimal: 'the decimal sign',
+  headerRow: 'whether the first row holds names',
+  timeColumn: 'the column of the time',
+  timeFormat: 'how the time is written',
+  elapsedFrom: 'when time 0 was',
+  timesWithoutZoneAreUtc: 'which zone the times are in',
+  valueColumn: 'the column of the deflection',
+  unit: 'the unit of the deflection',
 };
 
 function received(state: ImportState, imported: ImportView, remembered: RememberedMapping | null): ImportState {
@@ -57,16 +71,17 @@ function received(state: ImportState, imported: ImportView, remembered: Remember
   if (preview === null) return { ...state, imported, draft: null, check: null };
   const ambiguous = preview.ambiguous.filter((key): key is MappingKey => key in fieldWords);
   const names = preview.columns.map((column) => column.name);
-  const fits = remembered !== null && remembered.columns.length === names.length && remembered.columns.every((name, index) => name === names[index]);
+  const fits =
+    remembered !== null && remembered.columns.length === names.length && remembered.columns.every((name, index) => name === names[index]);
   const guessed = { elapsedFrom: '', timesWithoutZoneAreUtc: false, ...preview.mapping };
   const open = Object.fromEntries(ambiguous.filter((key) => key !== 'elapsedFrom').map((key) => [key, null]));
   const draft: MappingDraft = fits ? { ...guessed, ...remembered.mapping, elapsedFrom: '' } : { ...guessed, ...open };
   return { ...state, imported, draft, ambiguous: fits ? [] : ambiguous, remembered: fits, check: null };
 }
 
-
 /** ISO 8601 in UTC with Z, as the archive writes it. */
-export const isInstant = (text: string): boolean => /^\d{4}-\d\d-\d\dT\d\d:\d\d(:\d\d(\.\d+)?)?Z$/.test(text) && Number.isFinite(Date.parse(text));
+export const isInstant = (text: string): boolean =>
+  /^\d{4}-\d\d-\d\dT\d\d:\d\d(:\d\d(\.\d+)?)?Z$/.test(text) && Number.isFinite(Date.parse(text));
 
 /** The mapping once all is stated; before that, what is still missing, in words. */
 export function completeMapping(draft: MappingDraft): { mapping: ImportMapping; missing: null } | { mapping: null; missing: string[] } {
@@ -76,6 +91,9 @@ export function completeMapping(draft: MappingDraft): { mapping: ImportMapping; 
   if (draft.timeFormat === 'iso' && utc === null) missing.push(fieldWords.timesWithoutZoneAreUtc);
   if (draft.timeColumn !== null && draft.timeColumn === draft.valueColumn) missing.push('two different columns for time and deflection');
   if (missing.length > 0) return { mapping: null, missing };
-  const extra = { ...(draft.timeFormat === 'elapsed-s' ? { elapsedFrom } : {}), ...(draft.timeFormat === 'iso' && utc === true ? { timesWithoutZoneAreUtc: true } : {}) };
+  const extra = {
+    ...(draft.timeFormat === 'elapsed-s' ? { elapsedFrom } : {}),
+    ...(draft.timeFormat === 'iso' && utc === true ? { timesWithoutZoneAreUtc: true } : {}),
+  };
   return { mapping: { ...(rest as ImportMapping), ...extra }, missing: null };
 }

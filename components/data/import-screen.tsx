@@ -24,7 +24,21 @@ export function ImportScreen() {
   const failed = run.error ?? samples.error;
   return (
     <Screen title="Import deflection" back={back} testID="import-screen">
-      {!may.ok ? <Empty title="Not yours to do">{may.why}</Empty> : failed !== null ? <ProblemNotice title="The run could not be loaded" {...wordsOf(failed)} /> : view === undefined || samples.data === undefined ? <Loading /> : <ImportWork view={view} channelName={freeName(view, samples.data.data.channels.map(({ name }) => name))} />}
+      {!may.ok ? (
+        <Empty title="Not yours to do">{may.why}</Empty>
+      ) : failed !== null ? (
+        <ProblemNotice title="The run could not be loaded" {...wordsOf(failed)} />
+      ) : view === undefined || samples.data === undefined ? (
+        <Loading />
+      ) : (
+        <ImportWork
+          view={view}
+          channelName={freeName(
+            view,
+            samples.data.data.channels.map(({ name }) => name),
+          )}
+        />
+      )}
     </Screen>
   );
 }
@@ -42,7 +56,11 @@ function ImportWork({ view, channelName }: { view: RunView; channelName: string 
   if (stored !== null) return <Stored runId={view.id} {...stored} onAnother={work.anotherFile} />;
   return (
     <View className="gap-4">
-      {state.imported === null || state.draft === null ? <FileDrop onFile={(file) => void work.send(file)} busy={step === 'sending'} /> : <ChosenFile work={work} view={view} />}
+      {state.imported === null || state.draft === null ? (
+        <FileDrop onFile={(file) => void work.send(file)} busy={step === 'sending'} />
+      ) : (
+        <ChosenFile work={work} view={view} />
+      )}
       {step === 'sending' ? <Loading label="Sending the file" /> : null}
       {failure === null ? null : <ProblemNotice title={failure.title} detail={failure.detail} errors={failure.errors} />}
       {state.check === null ? null : <CheckPanel check={state.check} timeZone={timeZone} />}
@@ -71,12 +89,31 @@ function ChosenFile({ work, view }: { work: Work; view: RunView }) {
         </View>
         <Button kind="quiet" label="Another file" onPress={work.anotherFile} />
       </View>
-      <PreviewTable rows={rows} names={names} headerRow={draft.headerRow === true} timeColumn={draft.timeColumn} valueColumn={draft.valueColumn} />
-      <Section title="How to read it" remark={state.remembered ? 'Filled in as the last time in this lab on this device. Please look over it.' : 'Guessed from the file. What it does not tell stays open until you state it.'}>
+      <PreviewTable
+        rows={rows}
+        names={names}
+        headerRow={draft.headerRow === true}
+        timeColumn={draft.timeColumn}
+        valueColumn={draft.valueColumn}
+      />
+      <Section
+        title="How to read it"
+        remark={
+          state.remembered
+            ? 'Filled in as the last time in this lab on this device. Please look over it.'
+            : 'Guessed from the file. What it does not tell stays open until you state it.'
+        }
+      >
         <MappingForm draft={draft} ambiguous={state.ambiguous} names={names} runStart={view.startedAt} onChange={work.change} />
       </Section>
       <View className="wide:w-[270px]">
-        <Field label="Name of the channel" value={state.channelName} onChange={work.name} hint="The same name adds to a channel imported earlier." testID="channel-name" />
+        <Field
+          label="Name of the channel"
+          value={state.channelName}
+          onChange={work.name}
+          hint="The same name adds to a channel imported earlier."
+          testID="channel-name"
+        />
       </View>
     </View>
   );
@@ -90,14 +127,41 @@ function Acts({ work }: { work: Work }) {
     <View className="gap-2">
       {missing.length === 0 ? null : <Label tone="text">Still to state: {missing.join(', ')}.</Label>}
       <View className="flex-row flex-wrap gap-3">
-        <Button kind={ready ? 'plain' : 'primary'} label={state.check === null ? 'Check the file' : 'Check again'} busy={step === 'checking'} disabled={missing.length > 0} onPress={() => void work.check()} testID="check-import" />
-        {ready ? <Button kind="primary" label={`Store ${formatFixed(state.check?.rows ?? 0, { decimals: 0 })} samples`} busy={step === 'storing'} onPress={() => void work.store()} testID="store-import" /> : null}
+        <Button
+          kind={ready ? 'plain' : 'primary'}
+          label={state.check === null ? 'Check the file' : 'Check again'}
+          busy={step === 'checking'}
+          disabled={missing.length > 0}
+          onPress={() => void work.check()}
+          testID="check-import"
+        />
+        {ready ? (
+          <Button
+            kind="primary"
+            label={`Store ${formatFixed(state.check?.rows ?? 0, { decimals: 0 })} samples`}
+            busy={step === 'storing'}
+            onPress={() => void work.store()}
+            testID="store-import"
+          />
+        ) : null}
       </View>
     </View>
   );
 }
 
-function Stored({ runId, stored, known, channel, onAnother }: { runId: string; stored: number; known: number; channel: string; onAnother: () => void }) {
+function Stored({
+  runId,
+  stored,
+  known,
+  channel,
+  onAnother,
+}: {
+  runId: string;
+  stored: number;
+  known: number;
+  channel: string;
+  onAnother: () => void;
+}) {
   return (
     <Panel edge="good" className="gap-3" testID="import-stored">
       <View role="status" className="flex-row items-center gap-2">

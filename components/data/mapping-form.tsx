@@ -14,20 +14,33 @@ interface MappingFormProps {
 }
 
 const delimiters: { value: ImportMapping['delimiter']; label: string }[] = [
-  { value: ',', label: 'comma' }, { value: ';', label: 'semicolon' }, { value: '\t', label: 'tab' }, { value: '|', label: 'bar' }, { value: ' ', label: 'space' },
+  { value: ',', label: 'comma' },
+  { value: ';', label: 'semicolon' },
+  { value: '\t', label: 'tab' },
+  { value: '|', label: 'bar' },
+  { value: ' ', label: 'space' },
 ];
 const decimals: { value: ImportMapping['decimal']; label: string }[] = [
-  { value: '.', label: 'point, 1.5' }, { value: ',', label: 'comma, 1,5' },
+  { value: '.', label: 'point, 1.5' },
+  { value: ',', label: 'comma, 1,5' },
 ];
 const headers: { value: 'yes' | 'no'; label: string }[] = [
-  { value: 'yes', label: 'names of the columns' }, { value: 'no', label: 'data' },
+  { value: 'yes', label: 'names of the columns' },
+  { value: 'no', label: 'data' },
 ];
 const formats: { value: ImportMapping['timeFormat']; label: string }[] = [
-  { value: 'iso', label: 'date and time, ISO 8601' }, { value: 'epoch-s', label: 'seconds since 1970, UTC' }, { value: 'epoch-ms', label: 'milliseconds since 1970, UTC' }, { value: 'elapsed-s', label: 'seconds since a beginning' },
+  { value: 'iso', label: 'date and time, ISO 8601' },
+  { value: 'epoch-s', label: 'seconds since 1970, UTC' },
+  { value: 'epoch-ms', label: 'milliseconds since 1970, UTC' },
+  { value: 'elapsed-s', label: 'seconds since a beginning' },
 ];
 const zones: { value: 'utc'; label: string }[] = [{ value: 'utc', label: 'UTC' }];
 const units: { value: ImportMapping['unit']; label: string }[] = [
-  { value: 'rad', label: 'rad, pendulum angle' }, { value: 'mrad', label: 'mrad, pendulum angle' }, { value: 'urad', label: 'µrad, pendulum angle' }, { value: 'm', label: 'm, light spot on the scale' }, { value: 'mm', label: 'mm, light spot on the scale' },
+  { value: 'rad', label: 'rad, pendulum angle' },
+  { value: 'mrad', label: 'mrad, pendulum angle' },
+  { value: 'urad', label: 'µrad, pendulum angle' },
+  { value: 'm', label: 'm, light spot on the scale' },
+  { value: 'mm', label: 'mm, light spot on the scale' },
 ];
 
 interface ChoiceProps<V extends string> {
@@ -42,13 +55,26 @@ interface ChoiceProps<V extends string> {
 }
 
 /** A choice that starts empty where the file does not tell: a guess that nobody looked at would be worse than none. */
-function Choice<V extends string>({ label, value, options, open, onChange, testID, unstated: missing = 'The file does not tell. Please state it.' }: ChoiceProps<V>) {
+function Choice<V extends string>({
+  label,
+  value,
+  options,
+  open,
+  onChange,
+  testID,
+  unstated: missing = 'The file does not tell. Please state it.',
+}: ChoiceProps<V>) {
   const unstated = { value: '' as V, label: 'choose…' };
   return (
     <View className="wide:w-[270px]">
       <Select
-        label={label} value={value ?? ('' as V)} options={value === null ? [unstated, ...options] : options} onChange={(next) => (next === '' ? undefined : onChange(next))} testID={testID}
-        hint={open && value !== null ? 'The file does not tell; you stated it.' : undefined} error={value === null ? missing : undefined}
+        label={label}
+        value={value ?? ('' as V)}
+        options={value === null ? [unstated, ...options] : options}
+        onChange={(next) => (next === '' ? undefined : onChange(next))}
+        testID={testID}
+        hint={open && value !== null ? 'The file does not tell; you stated it.' : undefined}
+        error={value === null ? missing : undefined}
       />
     </View>
   );
@@ -61,26 +87,97 @@ export function MappingForm({ draft, ambiguous, names, runStart, onChange }: Map
   const open = (key: MappingKey) => ambiguous.includes(key);
   return (
     <View className="gap-4 wide:flex-row wide:flex-wrap" testID="mapping-form">
-      <Choice label="Columns are parted by" value={draft.delimiter} options={delimiters} open={open('delimiter')} onChange={(delimiter) => onChange({ delimiter })} testID="map-delimiter" />
-      <Choice label="Decimal sign" value={draft.decimal} options={decimals} open={open('decimal')} onChange={(decimal) => onChange({ decimal })} testID="map-decimal" />
-      <Choice label="The first row holds" value={draft.headerRow === null ? null : draft.headerRow ? 'yes' : 'no'} options={headers} open={open('headerRow')} onChange={(answer) => onChange({ headerRow: answer === 'yes' })} testID="map-header" />
-      <Choice label="Column of the time" value={column(draft.timeColumn)} options={columns} open={open('timeColumn')} onChange={(index) => onChange({ timeColumn: Number(index) })} testID="map-time" />
-      <Choice label="Time is written as" value={draft.timeFormat} options={formats} open={open('timeFormat')} onChange={(timeFormat) => onChange({ timeFormat })} testID="map-format" />
+      <Choice
+        label="Columns are parted by"
+        value={draft.delimiter}
+        options={delimiters}
+        open={open('delimiter')}
+        onChange={(delimiter) => onChange({ delimiter })}
+        testID="map-delimiter"
+      />
+      <Choice
+        label="Decimal sign"
+        value={draft.decimal}
+        options={decimals}
+        open={open('decimal')}
+        onChange={(decimal) => onChange({ decimal })}
+        testID="map-decimal"
+      />
+      <Choice
+        label="The first row holds"
+        value={draft.headerRow === null ? null : draft.headerRow ? 'yes' : 'no'}
+        options={headers}
+        open={open('headerRow')}
+        onChange={(answer) => onChange({ headerRow: answer === 'yes' })}
+        testID="map-header"
+      />
+      <Choice
+        label="Column of the time"
+        value={column(draft.timeColumn)}
+        options={columns}
+        open={open('timeColumn')}
+        onChange={(index) => onChange({ timeColumn: Number(index) })}
+        testID="map-time"
+      />
+      <Choice
+        label="Time is written as"
+        value={draft.timeFormat}
+        options={formats}
+        open={open('timeFormat')}
+        onChange={(timeFormat) => onChange({ timeFormat })}
+        testID="map-format"
+      />
       {draft.timeFormat === 'iso' && (draft.timesWithoutZoneAreUtc === null || open('timesWithoutZoneAreUtc')) ? (
         <Choice
-          label="Times without a zone are" value={draft.timesWithoutZoneAreUtc === true ? 'utc' : null} options={zones} open={false} onChange={() => onChange({ timesWithoutZoneAreUtc: true })} testID="map-zone"
+          label="Times without a zone are"
+          value={draft.timesWithoutZoneAreUtc === true ? 'utc' : null}
+          options={zones}
+          open={false}
+          onChange={() => onChange({ timesWithoutZoneAreUtc: true })}
+          testID="map-zone"
           unstated="The times name no zone. Local times cannot be read safely, because summer time repeats an hour: write UTC, or an offset such as +01:00, into the file."
         />
       ) : null}
-      <Choice label="Column of the deflection" value={column(draft.valueColumn)} options={columns} open={open('valueColumn')} onChange={(index) => onChange({ valueColumn: Number(index) })} testID="map-value" />
-      <Choice label="Unit of the deflection" value={draft.unit} options={units} open={open('unit')} onChange={(unit) => onChange({ unit })} testID="map-unit" />
+      <Choice
+        label="Column of the deflection"
+        value={column(draft.valueColumn)}
+        options={columns}
+        open={open('valueColumn')}
+        onChange={(index) => onChange({ valueColumn: Number(index) })}
+        testID="map-value"
+      />
+      <Choice
+        label="Unit of the deflection"
+        value={draft.unit}
+        options={units}
+        open={open('unit')}
+        onChange={(unit) => onChange({ unit })}
+        testID="map-unit"
+      />
       {draft.timeFormat === 'elapsed-s' ? (
         <View className="gap-2 wide:w-[560px]">
           <Field
-            label="Time 0 was at (UTC)" value={draft.elapsedFrom} onChange={(elapsedFrom) => onChange({ elapsedFrom })} mono placeholder="2031-03-13T20:58:00.000Z" testID="map-elapsed"
-            hint="By the clock of whatever wrote the file." error={draft.elapsedFrom === '' || isInstant(draft.elapsedFrom) ? undefined : 'Write it as 2031-03-13T20:58:00.000Z: date, T, time in UTC, Z.'}
+            label="Time 0 was at (UTC)"
+            value={draft.elapsedFrom}
+            onChange={(elapsedFrom) => onChange({ elapsedFrom })}
+            mono
+            placeholder="2031-03-13T20:58:00.000Z"
+            testID="map-elapsed"
+            hint="By the clock of whatever wrote the file."
+            error={
+              draft.elapsedFrom === '' || isInstant(draft.elapsedFrom)
+                ? undefined
+                : 'Write it as 2031-03-13T20:58:00.000Z: date, T, time in UTC, Z.'
+            }
           />
-          {runStart === null ? null : <Button kind="quiet" label="Time 0 was the start of the run" onPress={() => onChange({ elapsedFrom: runStart })} className="self-start" />}
+          {runStart === null ? null : (
+            <Button
+              kind="quiet"
+              label="Time 0 was the start of the run"
+              onPress={() => onChange({ elapsedFrom: runStart })}
+              className="self-start"
+            />
+          )}
         </View>
       ) : null}
     </View>

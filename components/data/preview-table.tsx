@@ -8,13 +8,20 @@ interface PreviewTableProps {
   valueColumn: number | null;
 }
 
-const role = (index: number, timeColumn: number | null, valueColumn: number | null) => (index === timeColumn ? 'time' : index === valueColumn ? 'deflection' : '');
+const role = (index: number, timeColumn: number | null, valueColumn: number | null) =>
+  index === timeColumn ? 'time' : index === valueColumn ? 'deflection' : '';
 
 /** The first rows of the file; the two columns that will be read are marked by word and frame. */
 export function PreviewTable({ rows, names, headerRow, timeColumn, valueColumn }: PreviewTableProps) {
   const body = rows.slice(headerRow ? 1 : 0, (headerRow ? 1 : 0) + 6);
   return (
-    <div className="overflow-x-auto rounded-panel bg-panel p-3" tabIndex={0} role="region" aria-label="First rows of the file" data-testid="import-preview">
+    <div
+      className="overflow-x-auto rounded-panel bg-panel p-3"
+      tabIndex={0}
+      role="region"
+      aria-label="First rows of the file"
+      data-testid="import-preview"
+    >
       <table className="border-collapse">
         <thead>
           <tr>
@@ -37,7 +44,10 @@ export function PreviewTable({ rows, names, headerRow, timeColumn, valueColumn }
             <tr key={line}>
               {names.map((name, index) => (
                 <td key={`${index} ${name}`} className="px-3 py-1">
-                  <Label tone={role(index, timeColumn, valueColumn) === '' ? 'dim' : 'text'} className="whitespace-nowrap font-mono tabular">
+                  <Label
+                    tone={role(index, timeColumn, valueColumn) === '' ? 'dim' : 'text'}
+                    className="whitespace-nowrap font-mono tabular"
+                  >
                     {row[index] ?? ''}
                   </Label>
                 </td>

@@ -15,16 +15,10 @@ export interface ImportFailure {
 
 type Step = 'sending' | 'checking' | 'storing' | null;
 
-/** An import from the choice of the file to the stored samples. Every failure leaves what was typed as it is. */
-export function useImport(runId: string, channelName: string) {
-  const { labId } = useLab();
-  const queries = useQueryClient();
-  const [state, dispatch] = useReducer(importReducer, channelName, noImport);
+/** One thing at a time: which step is under way, and why the last one failed. */
+function useAttempt() {
   const [step, setStep] = useState<Step>(null);
   const [failure, setFailure] = useState<ImportFailure | null>(null);
-  const [head, setHead] = useState('');
-  const [stored, setStored] = useState<{ stored: number; known: number; channel: string } | null>(null);
-
   const attempt = async (which: Step, title: string, act: () => Promise<void>) => {
     setStep(which);
     setFailure(null);
@@ -36,11 +30,28 @@ export function useImport(runId: string, channelName: string) {
       setStep(null);
     }
   };
+  return { step, failure, attempt, forget: () => setFailure(null) };
+}
+
+/** An import from the choice of the file to the stored samples. Every failure leaves what was typed as it is. */
+export function useImport(runId: string, channelName: string) {
+  const { labId } = useLab();
+  const queries = useQueryClient();
+  const [state, dispatch] = useReducer(importReducer, channelName, noImport);
+  const { step, failure, attempt, forget } = useAttempt();
+  const [head, setHead] = useState('');
+  const [stored, setStored] = useState<{ stored: number; known: number; channel: string } | null>(null);
+
   const mapping = state.draft === null ? null : completeMapping(state.draft);
   const importId = state.imported?.id ?? '';
 
   return {
-    state, step, failure, head, stored, mapping,
+    state,
+    step,
+    failure,
+    head,
+    stored,
+    mapping,
     send: (file: File) =>
       attempt('sending', `${file.name} was not taken in`, async () => {
         setHead(await file.slice(0, headBytes).text());
@@ -59,7 +70,10 @@ export function useImport(runId: string, channelName: string) {
     store: () =>
       attempt('storing', 'Nothing was stored', async () => {
         if (!mapping?.mapping) return;
-        const { data } = await call(commitImport, { params: { labId, importId }, body: { mapping: mapping.mapping, channelName: state.channelName } });
+        const { data } = await call(commitImport, {
+          params: { labId, importId },
+          body: { mapping: mapping.mapping, channelName: state.channelName },
+        });
         remember(labId, state.imported?.preview?.columns.map((column) => column.name) ?? [], mapping.mapping);
         setStored({ stored: data.stored, known: data.known, channel: data.channel.name });
         await queries.invalidateQueries({ queryKey: labKey(labId, readSamples) });
@@ -67,7 +81,7 @@ export function useImport(runId: string, channelName: string) {
     anotherFile: () => {
       dispatch({ kind: 'another-file' });
       setStored(null);
-      setFailure(null);
+      forget();
     },
   };
 }

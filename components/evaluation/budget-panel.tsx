@@ -20,7 +20,13 @@ export function BudgetPanel({ lines, rig }: BudgetPanelProps) {
   return (
     <Section title="Budget of uncertainty" remark="Share of each input in the square of u(G).">
       <BudgetBars lines={lines} />
-      <Button label={table ? 'Hide the table' : 'Show the table'} onPress={() => setTable(!table)} expanded={table} className="self-start" testID="budget-table-toggle" />
+      <Button
+        label={table ? 'Hide the table' : 'Show the table'}
+        onPress={() => setTable(!table)}
+        expanded={table}
+        className="self-start"
+        testID="budget-table-toggle"
+      />
       {table ? <BudgetTable lines={lines} rig={rig} /> : null}
     </Section>
   );
@@ -40,7 +46,11 @@ function BudgetTable({ lines, rig }: { lines: readonly BudgetLine[]; rig: RigDoc
         <thead>
           <tr className="border-b border-line">
             {['Input', 'Value and u', 'Sensitivity ∂G/∂input', 'Contribution to u(G)', 'Share'].map((title, index) => (
-              <th key={title} scope="col" className={`whitespace-nowrap py-2 pr-5 font-sans text-13 font-regular text-dim ${index === 0 ? 'text-left' : 'text-right'}`}>
+              <th
+                key={title}
+                scope="col"
+                className={`whitespace-nowrap py-2 pr-5 font-sans text-13 font-regular text-dim ${index === 0 ? 'text-left' : 'text-right'}`}
+              >
                 {title}
               </th>
             ))}

@@ -14,7 +14,10 @@ interface DwellListProps {
 export function DwellList({ dwells, selected, onSelect }: DwellListProps) {
   const used = dwells.filter((dwell) => dwell.used).length;
   return (
-    <Section title="Dwells" remark={`${used} of ${dwells.length} used. The centre is the fitted equilibrium at mid-dwell, drift not removed.`}>
+    <Section
+      title="Dwells"
+      remark={`${used} of ${dwells.length} used. The centre is the fitted equilibrium at mid-dwell, drift not removed.`}
+    >
       <View role="list" testID="dwell-list">
         {dwells.map((dwell, index) => (
           <DwellLine key={dwell.seq} dwell={dwell} chosen={dwell.seq === selected} last={index === dwells.length - 1} onSelect={onSelect} />
@@ -24,7 +27,17 @@ export function DwellList({ dwells, selected, onSelect }: DwellListProps) {
   );
 }
 
-function DwellLine({ dwell, chosen, last, onSelect }: { dwell: DwellResult; chosen: boolean; last: boolean; onSelect: (seq: number) => void }) {
+function DwellLine({
+  dwell,
+  chosen,
+  last,
+  onSelect,
+}: {
+  dwell: DwellResult;
+  chosen: boolean;
+  last: boolean;
+  onSelect: (seq: number) => void;
+}) {
   const lane = laneOf(dwell.station);
   const theta = dwell.theta_rad;
   return (
@@ -41,7 +54,11 @@ function DwellLine({ dwell, chosen, last, onSelect }: { dwell: DwellResult; chos
         <Icon name={lane === 'other' ? 'clear' : lane} size={14} tone={lane === 'near' ? 'near' : lane === 'far' ? 'far' : 'dim'} />
         <Body className="w-14 flex-none">{dwell.station}</Body>
         <View className="min-w-0 flex-1">
-          {theta === null ? <Label>no fit</Label> : <UncertainText value={theta.value * 1e3} u={theta.u * 1e3} unit="mrad" options={{ signed: true, exponent: 0 }} />}
+          {theta === null ? (
+            <Label>no fit</Label>
+          ) : (
+            <UncertainText value={theta.value * 1e3} u={theta.u * 1e3} unit="mrad" options={{ signed: true, exponent: 0 }} />
+          )}
           {dwell.used ? null : <Label tone="text">not used: {dwell.why ?? 'no reason given'}</Label>}
         </View>
         <Icon name={dwell.used ? 'tick' : 'failed'} size={16} tone={dwell.used ? 'good' : 'danger'} />

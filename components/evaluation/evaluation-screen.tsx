@@ -32,7 +32,13 @@ export function EvaluationScreen() {
   if (evaluation === null || evaluation.result === null || view === null) {
     return (
       <Screen title="Evaluation" back={back}>
-        {failed !== null ? <ProblemNotice title="The evaluation could not be loaded" detail={wordsOf(failed).detail} /> : run.isPending || evaluations.list.isPending || (evaluations.done !== null && full.isPending) ? <Loading label="Loading the evaluation" /> : panel}
+        {failed !== null ? (
+          <ProblemNotice title="The evaluation could not be loaded" detail={wordsOf(failed).detail} />
+        ) : run.isPending || evaluations.list.isPending || (evaluations.done !== null && full.isPending) ? (
+          <Loading label="Loading the evaluation" />
+        ) : (
+          panel
+        )}
       </Screen>
     );
   }
@@ -67,7 +73,12 @@ function Evaluated({ view, evaluation, result, panel, back }: EvaluatedProps) {
         </>
       }
     >
-      <GPanel result={result} heading={view.rehearsal ? 'G of a rehearsal' : 'G of this run'} registered={registeredWords(result, view.protocol, evaluation.channel)} trueG={view.simulated?.trueG ?? null} />
+      <GPanel
+        result={result}
+        heading={view.rehearsal ? 'G of a rehearsal' : 'G of this run'}
+        registered={registeredWords(result, view.protocol, evaluation.channel)}
+        trueG={view.simulated?.trueG ?? null}
+      />
       <FiguresPanel result={result} />
       <Warnings warnings={result.warnings} />
       <Section title="Reversals" remark="Near − far of adjacent dwells; the band is the mean ± u.">
@@ -78,7 +89,13 @@ function Evaluated({ view, evaluation, result, panel, back }: EvaluatedProps) {
       <BudgetPanel lines={result.budget} rig={view.rig} />
       <Chain chain={result.chain} />
       <View className="flex-row flex-wrap items-center gap-3">
-        <DownloadLink framed label="Archive of the run" address={addressOf(downloadArchive, { params: { labId, runId: view.id } })} fileName={`evenfall-${view.id}.zip`} testID="archive" />
+        <DownloadLink
+          framed
+          label="Archive of the run"
+          address={addressOf(downloadArchive, { params: { labId, runId: view.id } })}
+          fileName={`evenfall-${view.id}.zip`}
+          testID="archive"
+        />
       </View>
       <Label>
         Evaluated {formatDayAndClock(Date.parse(evaluation.createdAt), timeZone)} by {evaluation.createdBy}
@@ -108,7 +125,9 @@ function Chain({ chain }: { chain: EvaluationResult['chain'] }) {
   return (
     <View className="flex-row items-center gap-2" testID="chain">
       <Icon name={whole ? 'passed' : 'note'} size={18} tone={whole ? 'good' : 'dim'} />
-      <Label className="shrink">{whole ? `The chain of ${chain.events} events is whole and unchanged.` : 'There is no event chain to check.'}</Label>
+      <Label className="shrink">
+        {whole ? `The chain of ${chain.events} events is whole and unchanged.` : 'There is no event chain to check.'}
+      </Label>
     </View>
   );
 }

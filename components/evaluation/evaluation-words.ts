@@ -13,13 +13,21 @@ export function enWords(En: number | null): string {
 }
 
 /** Whether the evaluation is the one that was registered with the protocol, and if not, how it differs. */
-export function registeredWords(result: Pick<EvaluationResult, 'registered' | 'method'>, protocol: ProtocolDocument | null, channel: string | null): { words: string; differs: boolean } {
+export function registeredWords(
+  result: Pick<EvaluationResult, 'registered' | 'method'>,
+  protocol: ProtocolDocument | null,
+  channel: string | null,
+): { words: string; differs: boolean } {
   if (result.registered === null) return { words: 'no evaluation was registered', differs: false };
   if (result.registered) return { words: 'as registered', differs: false };
   const registered = protocol?.evaluation;
   const differences = [
-    registered?.method !== undefined && registered.method !== result.method ? `method ${result.method}, registered ${registered.method}` : '',
-    registered?.channel !== undefined && channel !== null && registered.channel !== channel ? `channel ${channel}, registered ${registered.channel}` : '',
+    registered?.method !== undefined && registered.method !== result.method
+      ? `method ${result.method}, registered ${registered.method}`
+      : '',
+    registered?.channel !== undefined && channel !== null && registered.channel !== channel
+      ? `channel ${channel}, registered ${registered.channel}`
+      : '',
   ].filter(Boolean);
   return { words: `not as registered${differences.length === 0 ? '' : `: ${differences.join('; ')}`}`, differs: true };
 }
@@ -31,11 +39,17 @@ export function unitOfInput(input: string, rig: RigDocument | null): string {
   const known = knownUnits[input];
   if (known !== undefined) return known;
   let at: unknown = rig;
-  for (const name of input.split(/[.[\]]/).filter(Boolean)) at = typeof at === 'object' && at !== null ? (at as Record<string, unknown>)[name] : undefined;
+  for (const name of input.split(/[.[\]]/).filter(Boolean))
+    at = typeof at === 'object' && at !== null ? (at as Record<string, unknown>)[name] : undefined;
   return typeof at === 'object' && at !== null && 'unit' in at && typeof at.unit === 'string' ? at.unit : '';
 }
 
-const methods: Record<EvaluationResult['method'], string> = { equilibrium: 'equilibrium method', period: 'period method', acceleration: 'acceleration method', modulation: 'modulation method' };
+const methods: Record<EvaluationResult['method'], string> = {
+  equilibrium: 'equilibrium method',
+  period: 'period method',
+  acceleration: 'acceleration method',
+  modulation: 'modulation method',
+};
 export const methodWords = (method: EvaluationResult['method']): string => methods[method];
 
 /** Dwells used of all. */

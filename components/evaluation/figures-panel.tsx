@@ -9,11 +9,20 @@ export function FiguresPanel({ result }: { result: EvaluationResult }) {
   const offset = alignment?.clockOffset_s ?? null;
   return (
     <Panel className="flex-row flex-wrap gap-x-8 gap-y-4" testID="figures">
-      {reversal === null ? null : <Figure name={`near − far, ${reversal.count} reversal${reversal.count === 1 ? '' : 's'}`} value={reversal.value * 1e3} u={reversal.u === null ? null : reversal.u * 1e3} unit="mrad" />}
+      {reversal === null ? null : (
+        <Figure
+          name={`near − far, ${reversal.count} reversal${reversal.count === 1 ? '' : 's'}`}
+          value={reversal.value * 1e3}
+          u={reversal.u === null ? null : reversal.u * 1e3}
+          unit="mrad"
+        />
+      )}
       {period === null ? null : <Figure name="damped period" {...period} unit="s" />}
       {decay === null ? null : <Figure name="decay time" {...decay} unit="s" />}
       {kappa === null ? null : <Figure name="κ of the fibre" {...kappa} unit={'N\u202fm'} />}
-      {offset === null ? null : <Figure name={alignment?.applied ? 'clock offset, applied' : 'clock offset, not applied'} {...offset} unit="s" />}
+      {offset === null ? null : (
+        <Figure name={alignment?.applied ? 'clock offset, applied' : 'clock offset, not applied'} {...offset} unit="s" />
+      )}
     </Panel>
   );
 }

@@ -11,7 +11,10 @@ interface FitPanelProps {
 
 /** The fit of one dwell, with the way to the one before and after. */
 export function FitPanel({ curves, selected, onSelect }: FitPanelProps) {
-  const at = Math.max(0, curves.findIndex((curve) => curve.seq === selected));
+  const at = Math.max(
+    0,
+    curves.findIndex((curve) => curve.seq === selected),
+  );
   const curve = curves[at];
   if (!curve) return null;
   const go = (by: number) => {

@@ -31,11 +31,24 @@ export function ControlBar({ view, local, onTap, timeZone }: ControlBarProps) {
       )}
       <View className="flex-row gap-4">
         <Button
-          className="min-w-0 flex-1" size="action" icon="hold" testID="hold"
-          label={view.state === 'held' ? 'Held' : 'Hold'} accessibilityLabel={view.state === 'held' ? 'Held' : 'Hold the run'}
-          disabled={holding || view.state === 'stopping' || stopSent} onPress={() => onTap('hold')}
+          className="min-w-0 flex-1"
+          size="action"
+          icon="hold"
+          testID="hold"
+          label={view.state === 'held' ? 'Held' : 'Hold'}
+          accessibilityLabel={view.state === 'held' ? 'Held' : 'Hold the run'}
+          disabled={holding || view.state === 'stopping' || stopSent}
+          onPress={() => onTap('hold')}
         />
-        <Button className="min-w-[56%] flex-none" size="action" kind="danger" icon="stop" testID="stop" label="Stop run" onPress={() => onTap('stop')} />
+        <Button
+          className="min-w-[56%] flex-none"
+          size="action"
+          kind="danger"
+          icon="stop"
+          testID="stop"
+          label="Stop run"
+          onPress={() => onTap('stop')}
+        />
       </View>
       <Label className="text-center">This is no emergency stop. The hard-wired one is at the rig.</Label>
     </View>

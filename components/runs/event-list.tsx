@@ -4,9 +4,13 @@ import type { ChainedEvent } from '@/shared/archive/run-records';
 import { formatClock } from '@/shared/lib/format-time';
 import { eventWords } from './run-words';
 
-/** Facts of an event as words: `by Ragna, after 6.2 s`. Nested values are shown as they are. */
+/** What the row above says already. */
+const saidAbove: ReadonlySet<string> = new Set(['seq', 'path', 'kind', 'label', 'station']);
+
+/** Facts of an event as names and values; nested values are shown as they are. */
 function factsOf(data: Record<string, unknown>): string {
   return Object.entries(data)
+    .filter(([name, value]) => !saidAbove.has(name) && value !== '' && value !== null)
     .map(([name, value]) => `${name} ${typeof value === 'object' ? JSON.stringify(value) : String(value)}`)
     .join(' · ');
 }

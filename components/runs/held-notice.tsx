@@ -17,7 +17,13 @@ export function HeldNotice({ view, timeZone, serverNowMs }: HeldNoticeProps) {
   const may = useMay('run.resume');
   const { online } = useConnection();
   if (view.state !== 'held') return view.reason === '' ? null : <ReasonPanel reason={view.reason} />;
-  const why = !may.ok ? may.why : !online ? 'The server cannot be reached; a resume is never kept for later.' : view.mayResume.ok ? '' : view.mayResume.why;
+  const why = !may.ok
+    ? may.why
+    : !online
+      ? 'The server cannot be reached; a resume is never kept for later.'
+      : view.mayResume.ok
+        ? ''
+        : view.mayResume.why;
   return (
     <Panel edge="lamp" className="gap-3" testID="held-notice">
       <Body>{view.reason === '' ? 'The run is held. Nothing moves.' : view.reason}</Body>

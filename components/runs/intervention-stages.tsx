@@ -37,8 +37,16 @@ export function InterventionStages({ stages, timeZone }: StagesProps) {
       </Label>
       <View className="flex-row gap-2" aria-hidden>
         <Stage state={stages.sent} title="Sent" detail="" />
-        <Stage state={server.state} title="Server has it" detail={server.atMs === null ? (server.state === 'failed' ? 'no' : '…') : clock(server.atMs)} />
-        <Stage state={controller.state} title={controller.state === 'done' ? `Controller: ${endWords[act]}` : 'Controller'} detail={controller.atMs === null ? (server.state === 'done' ? '…' : '') : clock(controller.atMs)} />
+        <Stage
+          state={server.state}
+          title="Server has it"
+          detail={server.atMs === null ? (server.state === 'failed' ? 'no' : '…') : clock(server.atMs)}
+        />
+        <Stage
+          state={controller.state}
+          title={controller.state === 'done' ? `Controller: ${endWords[act]}` : 'Controller'}
+          detail={controller.atMs === null ? (server.state === 'done' ? '…' : '') : clock(controller.atMs)}
+        />
       </View>
       {sentence === '' ? null : (
         <Body size={13} tone={failed ? 'danger' : 'text'} aria-hidden>

@@ -67,13 +67,34 @@ export function stagesOf(local: LocalIntervention, known: Known | null, state: R
   const pending = { act: local.act, by: null, controller: { state: 'waiting' as const, atMs: null } };
   switch (local.kind) {
     case 'sending':
-      return { ...pending, sent: 'done', server: { state: 'now', atMs: null }, sentence: local.unreachable ? `No answer yet, trying again (${local.attempts}). ${useTheSwitch}` : '' };
+      return {
+        ...pending,
+        sent: 'done',
+        server: { state: 'now', atMs: null },
+        sentence: local.unreachable ? `No answer yet, trying again (${local.attempts}). ${useTheSwitch}` : '',
+      };
     case 'accepted':
-      return { ...pending, sent: 'done', server: { state: 'done', atMs: local.serverAtMs }, controller: { state: 'now', atMs: null }, sentence: '' };
+      return {
+        ...pending,
+        sent: 'done',
+        server: { state: 'done', atMs: local.serverAtMs },
+        controller: { state: 'now', atMs: null },
+        sentence: '',
+      };
     case 'refused':
-      return { ...pending, sent: 'done', server: { state: 'failed', atMs: null }, sentence: `${words[local.act]} was refused: ${local.detail}` };
+      return {
+        ...pending,
+        sent: 'done',
+        server: { state: 'failed', atMs: null },
+        sentence: `${words[local.act]} was refused: ${local.detail}`,
+      };
     case 'unanswered':
-      return { ...pending, sent: 'done', server: { state: 'failed', atMs: null }, sentence: `No answer in 30 s after ${local.attempts} attempts; it is not known whether the rig got it. ${useTheSwitch} Tap again to try again.` };
+      return {
+        ...pending,
+        sent: 'done',
+        server: { state: 'failed', atMs: null },
+        sentence: `No answer in 30 s after ${local.attempts} attempts; it is not known whether the rig got it. ${useTheSwitch} Tap again to try again.`,
+      };
   }
 }
 
@@ -81,7 +102,9 @@ function fromServer(act: SafeAct, known: Known, by: string | null): Stages {
   const confirmed = known.confirmedAt !== null;
   const waitsForDwell = act === 'hold-after-dwell' && !confirmed;
   return {
-    act, by, sent: 'done',
+    act,
+    by,
+    sent: 'done',
     server: { state: 'done', atMs: Date.parse(known.serverAt) },
     controller: { state: confirmed ? 'done' : 'now', atMs: confirmed ? Date.parse(known.confirmedAt as string) : null },
     sentence: waitsForDwell ? 'The run goes on until this dwell has ended.' : '',
@@ -91,7 +114,10 @@ function fromServer(act: SafeAct, known: Known, by: string | null): Stages {
 /** A hold that was resumed, or a stop long confirmed, is history; one under way or in force is not. */
 function isFresh(known: Known, state: RunState): boolean {
   if (known.confirmedAt === null) return state !== 'finished' && state !== 'failed';
-  return (known.kind !== 'stop' && (state === 'held' || state === 'holding')) || (known.kind === 'stop' && (state === 'stopping' || state === 'stopped'));
+  return (
+    (known.kind !== 'stop' && (state === 'held' || state === 'holding')) ||
+    (known.kind === 'stop' && (state === 'stopping' || state === 'stopped'))
+  );
 }
 
 /** The server's record answers this page's act when it is not older than the answer, or than the tap (2 s for unequal clocks). */
@@ -106,7 +132,8 @@ function isAnswerTo(local: Exclude<LocalIntervention, { kind: 'idle' }>, known: 
 export function spokenStage(stages: Stages, clock: (utcMs: number) => string): string {
   const word = words[stages.act];
   const { controller, server } = stages;
-  if (controller.state === 'done' && controller.atMs !== null) return `${stages.act === 'stop' ? 'Stopped' : 'Held'}: the controller confirmed at ${clock(controller.atMs)}.`;
+  if (controller.state === 'done' && controller.atMs !== null)
+    return `${stages.act === 'stop' ? 'Stopped' : 'Held'}: the controller confirmed at ${clock(controller.atMs)}.`;
   if (server.state === 'failed') return stages.sentence;
   if (server.state === 'done') return `${word}: the server has it, waiting for the controller. ${stages.sentence}`.trim();
   return `${word} sent. ${stages.sentence}`.trim();

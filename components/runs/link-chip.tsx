@@ -12,7 +12,14 @@ const looks: Record<LinkAge['grade'], { tone: Tone; dot: Tone; icon: IconName | 
 /** How fresh the screen is, as one word and an age: `live 0.4 s`, `stale 3 s`, `lost`. */
 export function LinkChip({ age }: { age: LinkAge }) {
   const look = looks[age.grade];
-  const text = age.ageS === null ? 'waiting' : age.grade === 'live' ? `live ${age.ageS.toFixed(1)}\u202fs` : age.grade === 'stale' ? `stale ${Math.floor(age.ageS)}\u202fs` : 'lost';
+  const text =
+    age.ageS === null
+      ? 'waiting'
+      : age.grade === 'live'
+        ? `live ${age.ageS.toFixed(1)}\u202fs`
+        : age.grade === 'stale'
+          ? `stale ${Math.floor(age.ageS)}\u202fs`
+          : 'lost';
   return (
     <Chip dot={look.dot} tone={look.tone} mono testID="link-chip">
       {text}

@@ -1,22 +1,23 @@
 import { stepsOfLog, stepsOfPlan, type PlannedStep, type StripStep } from '@/components/charts/strip-model';
-import type { RunView, StepRowView } from '@/shared/contracts/runs';
+import type { RunState, RunView, StepRowView } from '@/shared/contracts/runs';
 import { planTimeline } from '@/shared/protocol/timeline';
 
 /** The rest of the night as it stands now: the plan from the step that is going on, moved to where that step really ends. Pure. */
 
-type Plannable = Pick<RunView, 'protocol' | 'rig' | 'startedAt' | 'state'>;
-
 /** The whole protocol as planned from its start; null where it cannot be planned (not started, or steps of a later version). */
-export function plannedItems(view: Plannable, timeZone: string): readonly PlannedStep[] | null {
+export function plannedItems(view: Pick<RunView, 'protocol' | 'rig' | 'startedAt'>, timeZone: string): readonly PlannedStep[] | null {
   if (view.startedAt === null) return null;
   try {
-    return planTimeline({ protocol: view.protocol, rig: view.rig, timeZone }, { utcMs: Date.parse(view.startedAt), angleDeg: view.rig.motion?.homeDeg ?? 0 }).items;
+    return planTimeline(
+      { protocol: view.protocol, rig: view.rig, timeZone },
+      { utcMs: Date.parse(view.startedAt), angleDeg: view.rig.motion?.homeDeg ?? 0 },
+    ).items;
   } catch {
     return null;
   }
 }
 
-const over: ReadonlySet<string> = new Set(['finished', 'stopped', 'failed']);
+const over: ReadonlySet<RunState> = new Set(['finished', 'stopped', 'failed']);
 
 export interface NightPlan {
   /** What was done, is being done and is to come. */
@@ -26,10 +27,10 @@ export interface NightPlan {
 }
 
 /** Rows of the log, then what is left of the plan. A run that has ended has no future. */
-export function nightPlan(view: Plannable, rows: readonly StepRowView[], items: readonly PlannedStep[] | null): NightPlan {
+export function nightPlan(state: RunState, rows: readonly StepRowView[], items: readonly PlannedStep[] | null): NightPlan {
   const done = stepsOfLog(rows);
   const last = rows.at(-1);
-  const future = items === null || over.has(view.state) ? [] : futureOf(items, last ?? null, done.at(-1) ?? null);
+  const future = items === null || over.has(state) ? [] : futureOf(items, last ?? null, done.at(-1) ?? null);
   const planned = stepsOfPlan(future);
   return { steps: [...done, ...planned], items: [...done.map((step) => ({ ...step, path: step.key })), ...future] };
 }

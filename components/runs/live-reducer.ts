@@ -46,7 +46,18 @@ const keptEvents = 200;
 const keptSamples = 12_000;
 
 export const noLive: LiveState = {
-  view: null, rows: [], events: [], channel: null, utcMs: [], value: [], beat: null, heardAtMs: null, offsets: [], stream: 'opening', seenSeq: 0, missed: false,
+  view: null,
+  rows: [],
+  events: [],
+  channel: null,
+  utcMs: [],
+  value: [],
+  beat: null,
+  heardAtMs: null,
+  offsets: [],
+  stream: 'opening',
+  seenSeq: 0,
+  missed: false,
 };
 
 /** The next state. Repeated and overtaken messages change nothing. */
@@ -84,14 +95,21 @@ function receive(before: LiveState, message: LiveMessage): LiveState {
 /** A view that is older than what was seen is kept out: a slow answer must not turn the screen back. */
 function withView(state: LiveState, view: RunView): LiveState {
   if (state.view !== null && view.lastSeq < state.view.lastSeq) return state;
-  return { ...state, view, seenSeq: Math.max(state.seenSeq, view.lastSeq) };
+  // Rig and protocol are fixed for a run: keeping the first ones keeps everything that is worked out from them.
+  const known = state.view?.id === view.id ? { ...view, rig: state.view.rig, protocol: state.view.protocol } : view;
+  return { ...state, view: known, seenSeq: Math.max(state.seenSeq, view.lastSeq) };
 }
 
 function withEvent(state: LiveState, event: ChainedEvent): LiveState {
   const newest = state.events.at(-1)?.seq ?? 0;
   if (event.seq <= newest) return state;
   const hole = newest > 0 && event.seq > newest + 1;
-  return { ...state, events: [...state.events, event].slice(-keptEvents), seenSeq: Math.max(state.seenSeq, event.seq), missed: state.missed || hole };
+  return {
+    ...state,
+    events: [...state.events, event].slice(-keptEvents),
+    seenSeq: Math.max(state.seenSeq, event.seq),
+    missed: state.missed || hole,
+  };
 }
 
 /** Rows by seq: a newer version of a row takes the place of the older one; one that has ended is never opened again. */

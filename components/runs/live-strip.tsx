@@ -23,14 +23,24 @@ export function LiveStrip({ strip, timeZone, serverNowMs, title, lost }: LiveStr
   return (
     <Panel className="gap-2" testID="live-strip">
       <View className="flex-row items-center justify-between gap-3">
-        <Label className="shrink">Deflection{strip.measured === null ? ': no data yet' : wide ? ': solid measured, faint predicted' : ''}</Label>
+        <Label className="shrink">
+          Deflection{strip.measured === null ? ': no data yet' : wide ? ': solid measured, faint predicted' : ''}
+        </Label>
         <Num size={17} tone={lost ? 'dim' : 'text'} aside={reading.unit} testID="deflection-now">
           {reading.number}
         </Num>
       </View>
       <SwingStrip
-        steps={strip.steps} timeZone={timeZone} title={title} window={window} measured={strip.measured} predicted={strip.predicted} equilibrium={strip.equilibrium}
-        nowUtcMs={serverNowMs} heightPx={wide ? 210 : 150} axis={false}
+        steps={strip.steps}
+        timeZone={timeZone}
+        title={title}
+        window={window}
+        measured={strip.measured}
+        predicted={strip.predicted}
+        equilibrium={strip.equilibrium}
+        nowUtcMs={serverNowMs}
+        heightPx={wide ? 210 : 150}
+        axis={false}
       />
       <View className="-mb-3 flex-row items-center justify-between gap-2">
         <Num size={13} tone="dim" aria-hidden>

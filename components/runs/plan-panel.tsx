@@ -14,7 +14,11 @@ interface PlanPanelProps {
   large?: boolean;
 }
 
-const sources: Record<StepRowView['angleSource'], string> = { counted: 'counted steps', 'edge-verified': 'proved at the home edge', encoder: 'read by the encoder' };
+const sources: Record<StepRowView['angleSource'], string> = {
+  counted: 'counted steps',
+  'edge-verified': 'proved at the home edge',
+  encoder: 'read by the encoder',
+};
 
 /** The turntable from above with its angle in figures and the last motion's end with its uncertainty. */
 export function PlanPanel({ view, rows, beat, lost, large = false }: PlanPanelProps) {

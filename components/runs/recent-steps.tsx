@@ -53,7 +53,11 @@ function StepLine({ row, timeZone, last }: { row: StepRowView; timeZone: string;
 /** A link that looks like a quiet button, 48 px high. */
 export function TextLink({ href, label }: { href: string; label: string }) {
   return (
-    <Link href={href as Href} className="min-h-target items-center justify-center rounded-action px-3 hover:bg-panel2" style={{ display: 'flex' }}>
+    <Link
+      href={href as Href}
+      className="min-h-target items-center justify-center rounded-action px-3 hover:bg-panel2"
+      style={{ display: 'flex' }}
+    >
       <Body tone="lamp" strong>
         {label}
       </Body>

@@ -16,6 +16,8 @@ import { formatDuration } from '@/shared/lib/format-duration';
 import { formatDay, zoneName } from '@/shared/lib/format-time';
 import { toRad } from './deflection-series';
 import { DownloadLink } from './download-link';
+import { stagesOf } from './intervention';
+import { InterventionStages } from './intervention-stages';
 import { TextLink } from './recent-steps';
 import { outcomeTitle, stateMark } from './run-words';
 
@@ -27,18 +29,40 @@ export function ResultScreen({ view }: { view: RunView }) {
   const evaluations = useEvaluations(view.id);
   const result = evaluations.done?.result ?? null;
   return (
-    <Screen title={titleOf(view, timeZone)} back={{ href: '/runs' as Href, label: 'Runs' }} trailing={<Chip tone={view.rehearsal ? 'lamp' : 'dim'}>{view.rehearsal ? 'rehearsal' : view.rigName}</Chip>} testID="result-screen">
+    <Screen
+      title={titleOf(view, timeZone)}
+      back={{ href: '/runs' as Href, label: 'Runs' }}
+      trailing={<Chip tone={view.rehearsal ? 'lamp' : 'dim'}>{view.rehearsal ? 'rehearsal' : view.rigName}</Chip>}
+      testID="result-screen"
+    >
       <Headline view={view} timeZone={timeZone} />
+      <LastStages view={view} timeZone={timeZone} />
       <WholeNight view={view} rows={rows} timeZone={timeZone} />
-      {result === null ? <EvaluatePanel runId={view.id} evaluations={evaluations} registeredChannel={view.protocol.evaluation?.channel ?? null} /> : <GPanel heading="G so far" result={result} registered={registeredWords(result, view.protocol, evaluations.done?.channel ?? null)} trueG={view.simulated?.trueG ?? null} />}
+      {result === null ? (
+        <EvaluatePanel runId={view.id} evaluations={evaluations} registeredChannel={view.protocol.evaluation?.channel ?? null} />
+      ) : (
+        <GPanel
+          heading="G so far"
+          result={result}
+          registered={registeredWords(result, view.protocol, evaluations.done?.channel ?? null)}
+          trueG={view.simulated?.trueG ?? null}
+        />
+      )}
       <Figures view={view} rows={rows} result={result} />
       <Links runId={view.id} />
       <View className="flex-row flex-wrap items-center gap-3">
-        <DownloadLink framed label="Archive of the run" address={addressOf(downloadArchive, { params: { labId, runId: view.id } })} fileName={`evenfall-${view.id}.zip`} testID="archive" />
+        <DownloadLink
+          framed
+          label="Archive of the run"
+          address={addressOf(downloadArchive, { params: { labId, runId: view.id } })}
+          fileName={`evenfall-${view.id}.zip`}
+          testID="archive"
+        />
       </View>
       <Label>
         {view.protocolName}
-        {view.protocolRevision > 0 ? `, revision ${view.protocolRevision}` : ''}, on {view.rigName} with {view.massSetLabel}, by {view.operator}.
+        {view.protocolRevision > 0 ? `, revision ${view.protocolRevision}` : ''}, on {view.rigName} with {view.massSetLabel}, by{' '}
+        {view.operator}.
       </Label>
       {view.notes === '' ? null : <Body>{view.notes}</Body>}
     </Screen>
@@ -70,6 +94,17 @@ function Headline({ view, timeZone }: { view: RunView; timeZone: string }) {
   );
 }
 
+/** Whoever has just stopped the run sees here that the controller confirmed it. */
+function LastStages({ view, timeZone }: { view: RunView; timeZone: string }) {
+  const stages = stagesOf({ kind: 'idle' }, view.intervention, view.state);
+  if (stages === null) return null;
+  return (
+    <Panel>
+      <InterventionStages stages={stages} timeZone={timeZone} />
+    </Panel>
+  );
+}
+
 function WholeNight({ view, rows, timeZone }: { view: RunView; rows: readonly StepRowView[]; timeZone: string }) {
   const wide = useWide();
   const samples = useLabQuery(readSamples, { params: { runId: view.id }, query: { points: 2000 } });
@@ -82,7 +117,13 @@ function WholeNight({ view, rows, timeZone }: { view: RunView; rows: readonly St
   if (rows.length === 0) return null;
   return (
     <Panel className="gap-1" testID="night-strip">
-      <SwingStrip steps={strip} timeZone={timeZone} title={`${view.rigName}, the whole run`} measured={measured} heightPx={wide ? 170 : 130} />
+      <SwingStrip
+        steps={strip}
+        timeZone={timeZone}
+        title={`${view.rigName}, the whole run`}
+        measured={measured}
+        heightPx={wide ? 170 : 130}
+      />
       {data !== null && data.total === 0 ? <Label>No deflection data yet.</Label> : null}
     </Panel>
   );
@@ -102,7 +143,12 @@ function Figures({ view, rows, result }: { view: RunView; rows: readonly StepRow
       </View>
       {reversal === null ? null : (
         <View>
-          <UncertainText size={20} value={reversal.value * 1e3} u={reversal.u === null ? null : reversal.u * 1e3} options={{ exponent: 0 }} />
+          <UncertainText
+            size={20}
+            value={reversal.value * 1e3}
+            u={reversal.u === null ? null : reversal.u * 1e3}
+            options={{ exponent: 0 }}
+          />
           <Label>mrad near − far</Label>
         </View>
       )}

@@ -38,7 +38,14 @@ export function ResumeSheet({ view, timeZone, serverNowMs, onClose }: ResumeShee
     ['Protocol', `${view.protocolName}, revision ${view.protocolRevision}`],
     ['Goes on with', view.current === null ? 'the next step' : stepTitle(view.current)],
     ['Dwells left', String(Math.max(0, view.dwellsPlanned - view.dwellsDone))],
-    ...(view.predictedEndAt === null || left === null || left < 0 ? [] : [['Ends about', `${formatClockWithZone(Date.parse(view.predictedEndAt), { timeZone, weekday: true })}, in ${formatDuration(left)}`] as [string, string]]),
+    ...(view.predictedEndAt === null || left === null || left < 0
+      ? []
+      : [
+          [
+            'Ends about',
+            `${formatClockWithZone(Date.parse(view.predictedEndAt), { timeZone, weekday: true })}, in ${formatDuration(left)}`,
+          ] as [string, string],
+        ]),
   ];
   return (
     <Sheet
@@ -46,7 +53,16 @@ export function ResumeSheet({ view, timeZone, serverNowMs, onClose }: ResumeShee
       title="Resume this run"
       onClose={onClose}
       testID="resume-sheet"
-      footer={<PressAndKeep label="Resume" icon="start" statement="Nobody is within reach of the turntable; it may move." onConfirm={() => void resume()} busy={busy} testID="resume-confirm" />}
+      footer={
+        <PressAndKeep
+          label="Resume"
+          icon="start"
+          statement="Nobody is within reach of the turntable; it may move."
+          onConfirm={() => void resume()}
+          busy={busy}
+          testID="resume-confirm"
+        />
+      }
     >
       <Body>The source masses will move. Whoever armed the rig answers for it on site.</Body>
       <View>

@@ -50,16 +50,18 @@ function TimeLeft({ view, timeZone, serverNowMs, lost }: RunHeadProps) {
   const counting = view.state === 'running' || view.state === 'rehearsing' || view.state === 'starting';
   const deadlineMs = counting && view.deadlineAt !== null ? Date.parse(view.deadlineAt) : null;
   const sinceMs = heldSince(view) ?? view.current?.startUtcMs ?? null;
-  const seconds = deadlineMs !== null ? (deadlineMs - serverNowMs) / 1000 : sinceMs === null ? null : Math.max(0, (serverNowMs - sinceMs) / 1000);
+  const seconds =
+    deadlineMs !== null ? (deadlineMs - serverNowMs) / 1000 : sinceMs === null ? null : Math.max(0, (serverNowMs - sinceMs) / 1000);
   const kind = view.current?.kind ?? 'step';
-  const what = deadlineMs !== null ? `left in this ${kind}` : !counting && sinceMs !== null ? 'since it came to rest' : 'since this step began';
+  const what =
+    deadlineMs !== null ? `left in this ${kind}` : !counting && sinceMs !== null ? 'since it came to rest' : 'since this step began';
   const clock = (utcMs: number) => formatClock(utcMs, { timeZone });
   return (
-    <View className="flex-row items-center gap-4">
+    <View className="flex-row flex-wrap items-center gap-x-4">
       <Num light size={60} tone={lost ? 'dim' : 'text'} testID="time-left" role="timer">
         {seconds === null ? '–:––' : formatCountdownWide(seconds)}
       </Num>
-      <View className="min-w-0 shrink">
+      <View className="min-w-[150px] shrink">
         <Label>{what}</Label>
         <Label>
           {deadlineMs === null ? null : (

@@ -15,7 +15,16 @@ export function RunMiniature({ run, timeZone }: { run: RunSummary; timeZone: str
   const measured = useMemo(() => (data && data.utcMs.length > 0 ? { x: data.utcMs, y: data.value } : null), [data]);
   return (
     <View style={{ height: 40 }}>
-      {strip.length === 0 ? null : <SwingStrip steps={strip} timeZone={timeZone} title={`${run.rigName}, ${run.protocolName}`} size="mini" heightPx={40} measured={measured} />}
+      {strip.length === 0 ? null : (
+        <SwingStrip
+          steps={strip}
+          timeZone={timeZone}
+          title={`${run.rigName}, ${run.protocolName}`}
+          size="mini"
+          heightPx={40}
+          measured={measured}
+        />
+      )}
     </View>
   );
 }

@@ -19,7 +19,12 @@ export function RunRow({ run, timeZone, last }: RunRowProps) {
   const startMs = Date.parse(run.startedAt ?? run.createdAt);
   const endMs = run.endedAt === null ? null : Date.parse(run.endedAt);
   return (
-    <Link href={`/runs/${run.id}` as Href} className={`gap-2 py-3 hover:bg-panel ${last ? '' : 'border-b border-line'}`} style={{ display: 'flex', flexDirection: 'column' }} testID="run-row">
+    <Link
+      href={`/runs/${run.id}` as Href}
+      className={`gap-2 py-3 hover:bg-panel ${last ? '' : 'border-b border-line'}`}
+      style={{ display: 'flex', flexDirection: 'column' }}
+      testID="run-row"
+    >
       <View className="flex-row items-center gap-3">
         <Icon name={mark.icon} size={22} tone={mark.tone === 'on-lamp' ? 'onLamp' : mark.tone} />
         <View className="min-w-0 flex-1">
@@ -46,7 +51,9 @@ export function RunRow({ run, timeZone, last }: RunRowProps) {
           <View className="min-w-0 flex-1">
             <RunMiniature run={run} timeZone={timeZone} />
           </View>
-          <Label className="w-[86px] flex-none text-right font-mono tabular">{endMs === null ? '' : formatDuration((endMs - startMs) / 1000)}</Label>
+          <Label className="w-[86px] flex-none text-right font-mono tabular">
+            {endMs === null ? '' : formatDuration((endMs - startMs) / 1000)}
+          </Label>
         </View>
       )}
     </Link>

@@ -12,6 +12,7 @@ import { LiveStrip } from './live-strip';
 import { PlanPanel } from './plan-panel';
 import { RecentSteps, TextLink } from './recent-steps';
 import { ResultScreen } from './result-screen';
+import { RehearsalAtWork } from './rehearsal-at-work';
 import { RunHead } from './run-head';
 import { isOver } from './run-words';
 import { useIntervention } from './use-intervention';
@@ -29,10 +30,19 @@ export function RunScreen() {
   if (view === null) {
     return (
       <Screen title="Run" back={back}>
-        {live.error === null ? <Loading label="Loading the run" /> : <ProblemNotice title="The run could not be loaded" detail={wordsOf(live.error).detail} action={{ label: 'Try again', onPress: live.refresh }} />}
+        {live.error === null ? (
+          <Loading label="Loading the run" />
+        ) : (
+          <ProblemNotice
+            title="The run could not be loaded"
+            detail={wordsOf(live.error).detail}
+            action={{ label: 'Try again', onPress: live.refresh }}
+          />
+        )}
       </Screen>
     );
   }
+  if (view.state === 'rehearsing') return <RehearsalAtWork view={view} refresh={live.refresh} />;
   return isOver(view.state) ? <ResultScreen view={view} /> : <LiveScreen view={view} live={live} />;
 }
 

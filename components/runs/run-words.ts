@@ -13,16 +13,32 @@ export interface StateMark {
 }
 
 const stateWords: Record<RunState, string> = {
-  rehearsing: 'Rehearsing', starting: 'Starting', running: 'Running', holding: 'Holding: coming to rest', held: 'Held', stopping: 'Stopping', finished: 'Finished', stopped: 'Stopped', failed: 'Failed',
+  rehearsing: 'Rehearsing',
+  starting: 'Starting',
+  running: 'Running',
+  holding: 'Holding: coming to rest',
+  held: 'Held',
+  stopping: 'Stopping',
+  finished: 'Finished',
+  stopped: 'Stopped',
+  failed: 'Failed',
 };
 const stateMarks: Record<RunState, StateMark> = {
-  rehearsing: { icon: 'repeat', tone: 'lamp' }, starting: { icon: 'start', tone: 'lamp' }, running: { icon: 'start', tone: 'lamp' }, holding: { icon: 'hold', tone: 'lamp' }, held: { icon: 'hold', tone: 'lamp' },
-  stopping: { icon: 'stop', tone: 'danger' }, finished: { icon: 'passed', tone: 'good' }, stopped: { icon: 'stop', tone: 'danger' }, failed: { icon: 'failed', tone: 'danger' },
+  rehearsing: { icon: 'repeat', tone: 'lamp' },
+  starting: { icon: 'start', tone: 'lamp' },
+  running: { icon: 'start', tone: 'lamp' },
+  holding: { icon: 'hold', tone: 'lamp' },
+  held: { icon: 'hold', tone: 'lamp' },
+  stopping: { icon: 'stop', tone: 'danger' },
+  finished: { icon: 'passed', tone: 'good' },
+  stopped: { icon: 'stop', tone: 'danger' },
+  failed: { icon: 'failed', tone: 'danger' },
 };
 
 export const isOver = (state: RunState): boolean => state === 'finished' || state === 'stopped' || state === 'failed';
 
-const laneMark = (lane: Lane): StateMark => (lane === 'near' ? { icon: 'near', tone: 'near' } : lane === 'far' ? { icon: 'far', tone: 'far' } : { icon: 'clear', tone: 'dim' });
+const laneMark = (lane: Lane): StateMark =>
+  lane === 'near' ? { icon: 'near', tone: 'near' } : lane === 'far' ? { icon: 'far', tone: 'far' } : { icon: 'clear', tone: 'dim' };
 
 /** A row of the log as a title: `Dwell, near side`, `Swing to far`, `Wait`. */
 export function stepTitle(row: Pick<StepRowView, 'kind' | 'station' | 'label'>): string {
@@ -41,7 +57,8 @@ export function stepTitle(row: Pick<StepRowView, 'kind' | 'station' | 'label'>):
   }
 }
 
-export const stepMark = (row: Pick<StepRowView, 'kind' | 'station'>): StateMark => (row.kind === 'home' ? { icon: 'home', tone: 'text' } : laneMark(laneOf(row.station)));
+export const stepMark = (row: Pick<StepRowView, 'kind' | 'station'>): StateMark =>
+  row.kind === 'home' ? { icon: 'home', tone: 'text' } : laneMark(laneOf(row.station));
 
 /** What the run is doing, in a few words, with the mark that says the same without colour. */
 export function runTitle(view: Pick<RunView, 'state' | 'current'>): { words: string; mark: StateMark } {
@@ -59,7 +76,14 @@ export function outcomeTitle(view: Pick<RunSummary, 'state' | 'endedAt'>, timeZo
 }
 
 const kinds: Record<string, string> = {
-  started: 'Started', 'run-started': 'Started', held: 'Held', resumed: 'Resumed', stopped: 'Stopped', finished: 'Finished', failed: 'Failed', archived: 'Archived',
+  started: 'Started',
+  'run-started': 'Started',
+  held: 'Held',
+  resumed: 'Resumed',
+  stopped: 'Stopped',
+  finished: 'Finished',
+  failed: 'Failed',
+  archived: 'Archived',
 };
 
 /** The kind of an event as words: `link-lost` → `Link lost`. */

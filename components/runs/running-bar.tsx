@@ -25,7 +25,11 @@ export function RunningBar() {
 function RunningLine({ run }: { run: RunSummary }) {
   const mark = stateMark(run.state);
   return (
-    <Link href={`/runs/${run.id}` as Href} className="min-h-target flex-row items-center gap-3 px-4 py-1 hover:bg-panel wide:px-7" style={{ display: 'flex', flexDirection: 'row' }}>
+    <Link
+      href={`/runs/${run.id}` as Href}
+      className="min-h-target flex-row items-center gap-3 px-4 py-1 hover:bg-panel wide:px-7"
+      style={{ display: 'flex', flexDirection: 'row' }}
+    >
       <Icon name={mark.icon} size={18} tone={mark.tone === 'on-lamp' ? 'onLamp' : mark.tone} />
       <Body strong numberOfLines={1} className="shrink">
         {run.rigName}

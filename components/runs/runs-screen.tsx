@@ -13,7 +13,8 @@ export function RunsScreen() {
   const { labId, timeZone } = useLab();
   const query = useInfiniteQuery({
     queryKey: labKey(labId, listRuns, { query: 'pages' }),
-    queryFn: ({ pageParam, signal }) => call(listRuns, { params: { labId }, query: { limit: 20, ...(pageParam === null ? {} : { cursor: pageParam }) }, signal }),
+    queryFn: ({ pageParam, signal }) =>
+      call(listRuns, { params: { labId }, query: { limit: 20, ...(pageParam === null ? {} : { cursor: pageParam }) }, signal }),
     initialPageParam: null as string | null,
     getNextPageParam: (page) => page.data.next,
     refetchInterval: everyMs,
@@ -24,7 +25,13 @@ export function RunsScreen() {
   return (
     <Screen title="Runs" testID="runs-screen">
       {query.isPending ? <Loading label="Loading the runs" /> : null}
-      {query.isError && runs.length === 0 ? <ProblemNotice title="The runs could not be loaded" detail={wordsOf(query.error).detail} action={{ label: 'Try again', onPress: () => void query.refetch() }} /> : null}
+      {query.isError && runs.length === 0 ? (
+        <ProblemNotice
+          title="The runs could not be loaded"
+          detail={wordsOf(query.error).detail}
+          action={{ label: 'Try again', onPress: () => void query.refetch() }}
+        />
+      ) : null}
       {query.isSuccess && runs.length === 0 ? (
         <Empty title="No runs yet" icon="runs">
           Start one from an issued protocol, or rehearse a protocol: a rehearsal runs a whole night on the simulated rig in seconds.
@@ -48,7 +55,9 @@ export function RunsScreen() {
           </View>
         </Section>
       )}
-      {query.hasNextPage ? <Button label="Show older runs" busy={query.isFetchingNextPage} onPress={() => void query.fetchNextPage()} /> : null}
+      {query.hasNextPage ? (
+        <Button label="Show older runs" busy={query.isFetchingNextPage} onPress={() => void query.fetchNextPage()} />
+      ) : null}
     </Screen>
   );
 }

@@ -3,6 +3,7 @@ import { Body, Icon, Label, Num, type IconName, type Tone } from '@/components/u
 import type { StepRowView } from '@/shared/contracts/runs';
 import { formatDegrees } from '@/shared/lib/format-angle';
 import { formatDelay, formatTimeUncertainty } from '@/shared/lib/format-duration';
+import { formatSignificant } from '@/shared/lib/format-number';
 import { formatLocalHonest, formatUtcHonest } from '@/shared/lib/format-time';
 import { stepMark, stepTitle } from './run-words';
 import { outcomeOf } from './step-filter';
@@ -12,10 +13,21 @@ export interface TimeBase {
   timeZone: string | null;
 }
 
-export const clockText = (utcMs: number, uS: number | null, { timeZone }: TimeBase): string => (timeZone === null ? formatUtcHonest(utcMs, uS) : formatLocalHonest(utcMs, uS, timeZone));
+export const clockText = (utcMs: number, uS: number | null, { timeZone }: TimeBase): string =>
+  timeZone === null ? formatUtcHonest(utcMs, uS) : formatLocalHonest(utcMs, uS, timeZone);
 
 /** Planned to the second, actual with its uncertainty, and the difference, which is the thing to see. */
-export function InstantCell({ plannedUtcMs, actualUtcMs, uS, base }: { plannedUtcMs: number | null; actualUtcMs: number | null; uS: number | null; base: TimeBase }) {
+export function InstantCell({
+  plannedUtcMs,
+  actualUtcMs,
+  uS,
+  base,
+}: {
+  plannedUtcMs: number | null;
+  actualUtcMs: number | null;
+  uS: number | null;
+  base: TimeBase;
+}) {
   const delayS = plannedUtcMs === null || actualUtcMs === null ? null : (actualUtcMs - plannedUtcMs) / 1000;
   const off = delayS !== null && Math.abs(delayS) >= 1;
   return (
@@ -31,7 +43,10 @@ export function InstantCell({ plannedUtcMs, actualUtcMs, uS, base }: { plannedUt
       {plannedUtcMs === null ? null : (
         <View className="flex-row flex-wrap items-baseline gap-x-2">
           <Label>
-            plan <Num size={13} tone="dim">{clockText(plannedUtcMs, 1.5, base).slice(0, 8)}</Num>
+            plan{' '}
+            <Num size={13} tone="dim">
+              {clockText(plannedUtcMs, 1.5, base).slice(0, 8)}
+            </Num>
           </Label>
           {delayS === null ? null : (
             <Num size={13} tone={off ? 'lamp' : 'dim'} strong={off}>
@@ -53,7 +68,7 @@ export function AngleCell({ row }: { row: StepRowView }) {
         <Num size={15}>{formatDegrees(row.angleEndDeg ?? row.angleStartDeg, 3)}</Num>
         {row.uAngleDeg === null ? null : (
           <Num size={13} tone="dim">
-            ± {row.uAngleDeg}°
+            ± {formatSignificant(row.uAngleDeg, 2)}°
           </Num>
         )}
       </View>
@@ -63,11 +78,19 @@ export function AngleCell({ row }: { row: StepRowView }) {
 }
 
 const outcomeLooks: Record<string, { icon: IconName; tone: Tone }> = {
-  done: { icon: 'tick', tone: 'good' }, running: { icon: 'start', tone: 'lamp' }, 'cut short': { icon: 'warning', tone: 'lamp' }, late: { icon: 'wait', tone: 'lamp' }, skipped: { icon: 'forward', tone: 'dim' }, failed: { icon: 'failed', tone: 'danger' },
+  done: { icon: 'tick', tone: 'good' },
+  running: { icon: 'start', tone: 'lamp' },
+  'cut short': { icon: 'warning', tone: 'lamp' },
+  late: { icon: 'wait', tone: 'lamp' },
+  skipped: { icon: 'forward', tone: 'dim' },
+  failed: { icon: 'failed', tone: 'danger' },
 };
 
 export function OutcomeCell({ row }: { row: StepRowView }) {
-  const look = row.good === false ? { icon: 'failed' as const, tone: 'danger' as const } : (outcomeLooks[row.outcome ?? 'running'] ?? { icon: 'note' as const, tone: 'dim' as const });
+  const look =
+    row.good === false
+      ? { icon: 'failed' as const, tone: 'danger' as const }
+      : (outcomeLooks[row.outcome ?? 'running'] ?? { icon: 'note' as const, tone: 'dim' as const });
   return (
     <View className="flex-row items-center gap-1.5">
       <Icon name={look.icon} size={16} tone={look.tone === 'on-lamp' ? 'onLamp' : look.tone} />

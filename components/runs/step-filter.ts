@@ -17,11 +17,15 @@ export function outcomeOf(row: Pick<StepRowView, 'outcome' | 'good'>): string {
   return row.good === false ? `${outcome}, not good` : outcome;
 }
 
-const matchesOutcome = (row: StepRowView, wanted: string) => wanted === everything || (wanted === 'not good' ? row.good === false : (row.outcome ?? 'running') === wanted);
+const matchesOutcome = (row: StepRowView, wanted: string) =>
+  wanted === everything || (wanted === 'not good' ? row.good === false : (row.outcome ?? 'running') === wanted);
 
 export function filterSteps(rows: readonly StepRowView[], filter: StepFilter): StepRowView[] {
   return rows.filter(
-    (row) => (filter.kind === everything || row.kind === filter.kind) && (filter.station === everything || row.station === filter.station) && matchesOutcome(row, filter.outcome),
+    (row) =>
+      (filter.kind === everything || row.kind === filter.kind) &&
+      (filter.station === everything || row.station === filter.station) &&
+      matchesOutcome(row, filter.outcome),
   );
 }
 
@@ -38,4 +42,5 @@ export function filterChoices(rows: readonly StepRowView[]): Record<keyof StepFi
 
 /** Actual minus planned, s; null where one of them is missing. */
 export const startDelayS = (row: StepRowView): number => (row.startUtcMs - row.plannedStartUtcMs) / 1000;
-export const endDelayS = (row: StepRowView): number | null => (row.endUtcMs === null || row.plannedEndUtcMs === null ? null : (row.endUtcMs - row.plannedEndUtcMs) / 1000);
+export const endDelayS = (row: StepRowView): number | null =>
+  row.endUtcMs === null || row.plannedEndUtcMs === null ? null : (row.endUtcMs - row.plannedEndUtcMs) / 1000;

@@ -31,14 +31,30 @@ export function StepLogScreen() {
       testID="step-log"
     >
       {steps.isPending ? <Loading label="Loading the step log" /> : null}
-      {steps.isError ? <ProblemNotice title="The step log could not be loaded" detail={wordsOf(steps.error).detail} action={{ label: 'Try again', onPress: () => void steps.refetch() }} /> : null}
-      {steps.isSuccess && rows.length === 0 ? <Empty title="No steps yet">The first row appears when the run begins its first step.</Empty> : null}
+      {steps.isError ? (
+        <ProblemNotice
+          title="The step log could not be loaded"
+          detail={wordsOf(steps.error).detail}
+          action={{ label: 'Try again', onPress: () => void steps.refetch() }}
+        />
+      ) : null}
+      {steps.isSuccess && rows.length === 0 ? (
+        <Empty title="No steps yet">The first row appears when the run begins its first step.</Empty>
+      ) : null}
       {rows.length === 0 ? null : <LoggedSteps rows={rows} events={events.data ?? []} timeZone={timeZone} />}
     </Screen>
   );
 }
 
-function LoggedSteps({ rows, events, timeZone }: { rows: readonly StepRowView[]; events: NonNullable<ReturnType<typeof useEvents>['data']>; timeZone: string }) {
+function LoggedSteps({
+  rows,
+  events,
+  timeZone,
+}: {
+  rows: readonly StepRowView[];
+  events: NonNullable<ReturnType<typeof useEvents>['data']>;
+  timeZone: string;
+}) {
   const wide = useWide();
   const [filter, setFilter] = useState<StepFilter>(noFilter);
   const [zone, setZone] = useState<'lab' | 'utc'>('lab');
@@ -50,13 +66,28 @@ function LoggedSteps({ rows, events, timeZone }: { rows: readonly StepRowView[];
       <Filters rows={rows} filter={filter} onChange={setFilter} />
       <View className="flex-row flex-wrap items-center justify-between gap-3">
         <Label>
-          {shown.length === rows.length ? `${rows.length} rows` : `${shown.length} of ${rows.length} rows`}, times in {zone === 'utc' ? 'UTC' : zoneName(timeZone)}
+          {shown.length === rows.length ? `${rows.length} rows` : `${shown.length} of ${rows.length} rows`}, times in{' '}
+          {zone === 'utc' ? 'UTC' : zoneName(timeZone)}
         </Label>
         <View className="w-[220px]">
-          <Tabs label="Times in" value={zone} onChange={setZone} options={[{ value: 'lab', label: 'Lab time' }, { value: 'utc', label: 'UTC' }]} />
+          <Tabs
+            label="Times in"
+            value={zone}
+            onChange={setZone}
+            options={[
+              { value: 'lab', label: 'Lab time' },
+              { value: 'utc', label: 'UTC' },
+            ]}
+          />
         </View>
       </View>
-      {shown.length === 0 ? <Empty title="No row like that" icon="filter" action={{ label: 'Show all rows', onPress: () => setFilter(noFilter) }} /> : wide ? <StepTable {...list} /> : <StepCards {...list} />}
+      {shown.length === 0 ? (
+        <Empty title="No row like that" icon="filter" action={{ label: 'Show all rows', onPress: () => setFilter(noFilter) }} />
+      ) : wide ? (
+        <StepTable {...list} />
+      ) : (
+        <StepCards {...list} />
+      )}
       <Panel>
         <ChainHead events={events} />
       </Panel>
@@ -64,24 +95,55 @@ function LoggedSteps({ rows, events, timeZone }: { rows: readonly StepRowView[];
   );
 }
 
-const optionsOf = (all: string, values: readonly string[]) => [{ value: everything, label: all }, ...values.map((value) => ({ value, label: value }))];
+const optionsOf = (all: string, values: readonly string[]) => [
+  { value: everything, label: all },
+  ...values.map((value) => ({ value, label: value })),
+];
 
 function Filters({ rows, filter, onChange }: { rows: readonly StepRowView[]; filter: StepFilter; onChange: (filter: StepFilter) => void }) {
   const wide = useWide();
   const [shown, setShown] = useState(false);
   const choices = useMemo(() => filterChoices(rows), [rows]);
   const active = filter !== noFilter && Object.values(filter).some((value) => value !== everything);
-  if (!wide && !shown) return <Button icon="filter" label={active ? 'Filter is on' : 'Filter'} onPress={() => setShown(true)} expanded={false} className="self-start" testID="filter" />;
+  if (!wide && !shown)
+    return (
+      <Button
+        icon="filter"
+        label={active ? 'Filter is on' : 'Filter'}
+        onPress={() => setShown(true)}
+        expanded={false}
+        className="self-start"
+        testID="filter"
+      />
+    );
   return (
     <View className="gap-3 wide:flex-row" role="group" aria-label="Filter of the step log">
       <View className="wide:w-[190px]">
-        <Select label="Kind" value={filter.kind} options={optionsOf('every kind', choices.kind)} onChange={(kind) => onChange({ ...filter, kind })} testID="filter-kind" />
+        <Select
+          label="Kind"
+          value={filter.kind}
+          options={optionsOf('every kind', choices.kind)}
+          onChange={(kind) => onChange({ ...filter, kind })}
+          testID="filter-kind"
+        />
       </View>
       <View className="wide:w-[190px]">
-        <Select label="Station" value={filter.station} options={optionsOf('every station', choices.station)} onChange={(station) => onChange({ ...filter, station })} testID="filter-station" />
+        <Select
+          label="Station"
+          value={filter.station}
+          options={optionsOf('every station', choices.station)}
+          onChange={(station) => onChange({ ...filter, station })}
+          testID="filter-station"
+        />
       </View>
       <View className="wide:w-[190px]">
-        <Select label="Outcome" value={filter.outcome} options={optionsOf('every outcome', choices.outcome)} onChange={(outcome) => onChange({ ...filter, outcome })} testID="filter-outcome" />
+        <Select
+          label="Outcome"
+          value={filter.outcome}
+          options={optionsOf('every outcome', choices.outcome)}
+          onChange={(outcome) => onChange({ ...filter, outcome })}
+          testID="filter-outcome"
+        />
       </View>
     </View>
   );

@@ -65,7 +65,7 @@ export function StepTable({ rows, events, base, timeZone, open, onOpen }: StepLi
               <tr className="border-b border-line">
                 <td />
                 <td colSpan={6} className="pb-4">
-                  <EventList events={eventsOf(events, row.startUtcMs, row.endUtcMs)} timeZone={timeZone} />
+                  <EventList events={eventsOf(events, row)} timeZone={timeZone} />
                 </td>
               </tr>
             ) : null}
@@ -104,7 +104,7 @@ export function StepCards({ rows, events, base, timeZone, open, onOpen }: StepLi
                 <OpenButton seq={row.seq} open={open === row.seq} onOpen={onOpen} />
               </View>
             </View>
-            {open === row.seq ? <EventList events={eventsOf(events, row.startUtcMs, row.endUtcMs)} timeZone={timeZone} /> : null}
+            {open === row.seq ? <EventList events={eventsOf(events, row)} timeZone={timeZone} /> : null}
           </View>
         </Panel>
       ))}

@@ -27,10 +27,15 @@ export function useEvents(runId: string, live: boolean) {
   });
 }
 
-/** Events between a step's start and its end; the last step keeps what came after it. */
-export function eventsOf(events: readonly ChainedEvent[], startUtcMs: number, endUtcMs: number | null): ChainedEvent[] {
+/** Events that name the step, and those without a step that came between its start and its end; the last step keeps what came after it. */
+export function eventsOf(
+  events: readonly ChainedEvent[],
+  row: { seq: number; startUtcMs: number; endUtcMs: number | null },
+): ChainedEvent[] {
   return events.filter((event) => {
+    const named = event.data['seq'];
+    if (typeof named === 'number') return named === row.seq;
     const at = Date.parse(event.at);
-    return at >= startUtcMs - 1 && (endUtcMs === null || at < endUtcMs);
+    return at >= row.startUtcMs - 1 && (row.endUtcMs === null || at < row.endUtcMs);
   });
 }

@@ -23,10 +23,17 @@ interface Request extends RunAddress {
 
 async function sendOnce({ labId, runId, act, key, tappedAt }: Request, signal: AbortSignal): Promise<Attempt<Outcome>> {
   try {
-    const { data } = await call(routes[act], { params: { labId, runId }, body: { tappedAt }, idempotencyKey: key, keepalive: true, signal });
+    const { data } = await call(routes[act], {
+      params: { labId, runId },
+      body: { tappedAt },
+      idempotencyKey: key,
+      keepalive: true,
+      signal,
+    });
     return { kind: 'answer', value: { kind: 'accepted', serverAtMs: Date.parse(data.serverAt) } };
   } catch (error) {
-    if (error instanceof ApiProblem && !inconclusive.has(error.code)) return { kind: 'answer', value: { kind: 'refused', detail: error.detail } };
+    if (error instanceof ApiProblem && !inconclusive.has(error.code))
+      return { kind: 'answer', value: { kind: 'refused', detail: error.detail } };
     return { kind: 'none' };
   }
 }
@@ -88,7 +95,9 @@ export async function resumeOnce({ labId, runId }: RunAddress): Promise<{ server
 /** No answer within the 5 s for which a resume counts. */
 export class ResumeExpired extends Error {
   constructor() {
-    super('There was no answer in 5 s, so this resume has expired and was not sent again. Look at the state above before you try once more.');
+    super(
+      'There was no answer in 5 s, so this resume has expired and was not sent again. Look at the state above before you try once more.',
+    );
     this.name = 'ResumeExpired';
   }
 }

@@ -2,6 +2,7 @@ import { useCallback, useEffect, useReducer, useRef } from 'react';
 import { addressOf, call, deviceNowMs, useLab } from '@/components/api';
 import { reportReached } from '@/components/api/connection';
 import { getRun, listSteps, liveMessageSchemas, liveRun, type LiveMessages } from '@/shared/contracts/runs';
+import { isOver } from './run-words';
 import { liveReducer, noLive, type LiveMessage, type LiveState } from './live-reducer';
 
 const flushMs = 200;
@@ -69,11 +70,12 @@ export interface LiveRun {
  * A run as it happens: the stream for what is new, the ordinary routes for what came before, for gaps, and every 2 s
  * while the stream is silent, so that a confirmation is not missed behind a proxy that swallows streams.
  */
-export function useLiveRun(runId: string, on = true): LiveRun {
+export function useLiveRun(runId: string): LiveRun {
   const { labId } = useLab();
   const [state, dispatch] = useReducer(liveReducer, noLive);
   const [error, setError] = useReducer((_: unknown, next: unknown) => next, null);
   const waiting = useRef<LiveMessage[]>([]);
+  const on = state.view === null || !isOver(state.view.state);
 
   const refresh = useCallback(async () => {
     try {
@@ -108,7 +110,9 @@ export function useLiveRun(runId: string, on = true): LiveRun {
   }, [labId, runId, on]);
 
   const heardAt = useRef<number | null>(null);
-  heardAt.current = state.heardAtMs;
+  useEffect(() => {
+    heardAt.current = state.heardAtMs;
+  }, [state.heardAtMs]);
   useEffect(() => {
     if (!on) return undefined;
     const timer = setInterval(() => {
@@ -121,5 +125,6 @@ export function useLiveRun(runId: string, on = true): LiveRun {
     if (state.missed) void refresh();
   }, [state.missed, refresh]);
 
-  return { state, error, refresh: () => void refresh() };
+  const again = useCallback(() => void refresh(), [refresh]);
+  return { state, error, refresh: again };
 }

@@ -25,30 +25,40 @@ export function useRunStrip(runId: string, state: LiveState, timeZone: string): 
   const history = useLabQuery(readSamples, { params: { runId }, query: { points: 2000 }, everyMs: 60_000 });
   const samples = history.data?.data ?? null;
 
-  const planKey = view === null ? null : `${view.id} ${view.startedAt ?? ''}`;
-  const items = useMemo(() => (view === null ? null : plannedItems(view, timeZone)), [planKey, timeZone]); // a protocol does not change during its run
-  const night = useMemo(() => (view === null ? { steps: [], items: [] } : nightPlan(view, rows, items)), [view, rows, items]);
+  const rig = view?.rig ?? null;
+  const protocol = view?.protocol ?? null;
+  const startedAt = view?.startedAt ?? null;
+  const runState = view?.state ?? null;
+  const items = useMemo(
+    () => (rig === null || protocol === null ? null : plannedItems({ rig, protocol, startedAt }, timeZone)),
+    [rig, protocol, startedAt, timeZone],
+  );
+  const night = useMemo(() => (runState === null ? { steps: [], items: [] } : nightPlan(runState, rows, items)), [runState, rows, items]);
 
   const measured = useMemo(() => {
-    if (view === null) return null;
-    const old = samples?.channel ? { x: samples.utcMs, y: toRad(samples.value, samples.channel.unit, view.rig) } : null;
+    if (rig === null) return null;
+    const old = samples?.channel ? { x: samples.utcMs, y: toRad(samples.value, samples.channel.unit, rig) } : null;
     const lastOld = old?.x.at(-1) ?? -Infinity;
     const first = state.utcMs.findIndex((at) => at > lastOld);
-    const fresh = state.channel === null || first < 0 ? null : toRad(state.value.slice(first), state.channel.unit, view.rig);
+    const fresh = state.channel === null || first < 0 ? null : toRad(state.value.slice(first), state.channel.unit, rig);
     if (!old?.y && !fresh) return null;
     return { x: [...(old?.y ? old.x : []), ...(fresh ? state.utcMs.slice(first) : [])], y: [...(old?.y ?? []), ...(fresh ?? [])] };
-  }, [view, samples, state.channel, state.utcMs, state.value]);
+  }, [rig, samples, state.channel, state.utcMs, state.value]);
 
   const prediction = useMemo(() => {
     const first = night.items[0];
     const last = night.items.at(-1);
-    if (view === null || !first || !last) return null;
+    if (rig === null || !first || !last) return null;
     try {
-      return predictDeflection(view.rig, { items: night.items as TimelineItem[], startUtcMs: first.startUtcMs, endUtcMs: last.endUtcMs }, points);
+      return predictDeflection(
+        rig,
+        { items: night.items as TimelineItem[], startUtcMs: first.startUtcMs, endUtcMs: last.endUtcMs },
+        points,
+      );
     } catch {
       return null;
     }
-  }, [view?.rig, night]);
+  }, [rig, night]);
 
   return useMemo(() => {
     const newest = measured?.y.at(-1) ?? null;

@@ -20,7 +20,15 @@ function partsIn(utcMs: number, timeZone: string): Record<string, string> {
   let formatter = formatters.get(timeZone);
   if (!formatter) {
     formatter = new Intl.DateTimeFormat('en-GB', {
-      timeZone, hourCycle: 'h23', year: 'numeric', month: '2-digit', day: '2-digit', weekday: 'short', hour: '2-digit', minute: '2-digit', second: '2-digit',
+      timeZone,
+      hourCycle: 'h23',
+      year: 'numeric',
+      month: '2-digit',
+      day: '2-digit',
+      weekday: 'short',
+      hour: '2-digit',
+      minute: '2-digit',
+      second: '2-digit',
     });
     formatters.set(timeZone, formatter);
   }
@@ -70,7 +78,9 @@ export function formatUtcHonest(utcMs: number, uS: number | null): string {
   const total = rounded >= 86_400 ? rounded - 86_400 : rounded;
   const h = Math.floor(total / 3600 + 1e-12);
   const min = Math.floor((total - h * 3600) / 60 + 1e-12);
-  const [s = '0', fraction = ''] = Math.max(0, total - h * 3600 - min * 60).toFixed(decimals).split('.');
+  const [s = '0', fraction = ''] = Math.max(0, total - h * 3600 - min * 60)
+    .toFixed(decimals)
+    .split('.');
   const digits = fraction.replace(/(\d{3})(?=\d)/, `$1${NARROW_SPACE}`);
   return `${two(h)}:${two(min)}:${s.padStart(2, '0')}${digits === '' ? '' : `.${digits}`}`;
 }

@@ -1,4 +1,13 @@
-import { type DecimalSign, formatFixed, formatSignificant, MINUS, NARROW_SPACE, superscript, SUPERSCRIPTS, withUnit } from './format-number';
+import {
+  type DecimalSign,
+  formatFixed,
+  formatSignificant,
+  MINUS,
+  NARROW_SPACE,
+  superscript,
+  SUPERSCRIPTS,
+  withUnit,
+} from './format-number';
 
 export interface Uncertain {
   value: number;
@@ -64,7 +73,10 @@ export function uncertainParts({ value, u, unit = '' }: Uncertain, options: Unce
   // Decimal shifting by text keeps digits exact where dividing by a power of ten would not.
   const scale = (x: number) => shifted(x, -exponent);
   if (usableU === 0) {
-    const text = u === 0 ? shortest(scale(value), options) : formatSignificant(scale(value), 4, { signed: options.signed ?? false, decimalSign: sign });
+    const text =
+      u === 0
+        ? shortest(scale(value), options)
+        : formatSignificant(scale(value), 4, { signed: options.signed ?? false, decimalSign: sign });
     return { value: text, uncertainty: '', factor, unit: unitText };
   }
   const decimals = Math.min(20, Math.max(0, exponent - lastDecade(usableU)));
@@ -101,7 +113,8 @@ function shortest(value: number, options: UncertainOptions): string {
   return formatFixed(value, { decimals: Math.min(12, digits), signed: options.signed, decimalSign: options.decimalSign });
 }
 
-const PATTERN = /^([+\u2212-]?[\d\u202f ]+(?:[.,][\d\u202f ]+)?)(?:\(([\d.,]+)\))?(?:[\u202f ]*×[\u202f ]*10([⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+))?(?:[\u202f ]*(\D.*))?$/u;
+const PATTERN =
+  /^([+\u2212-]?[\d\u202f ]+(?:[.,][\d\u202f ]+)?)(?:\(([\d.,]+)\))?(?:[\u202f ]*×[\u202f ]*10([⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+))?(?:[\u202f ]*(\D.*))?$/u;
 
 /**
  * Reads what {@link formatUncertain} wrote.
@@ -115,11 +128,18 @@ export function parseUncertain(text: string): { value: number; u: number | null;
   const decimals = digits.split('.')[1]?.length ?? 0;
   const bracket = match[2] ? plainDigits(match[2]) : null;
   const inBrackets = bracket === null ? null : bracket.includes('.') ? Number(bracket) : shifted(Number(bracket), -decimals);
-  return { value: shifted(Number(digits), exponent), u: inBrackets === null ? null : shifted(inBrackets, exponent), unit: (match[4] ?? '').trim() };
+  return {
+    value: shifted(Number(digits), exponent),
+    u: inBrackets === null ? null : shifted(inBrackets, exponent),
+    unit: (match[4] ?? '').trim(),
+  };
 }
 
 function plainDigits(text: string): string {
-  return text.replace(/[\u202f ]/g, '').replace(MINUS, '-').replace(',', '.');
+  return text
+    .replace(/[\u202f ]/g, '')
+    .replace(MINUS, '-')
+    .replace(',', '.');
 }
 
 function fromSuperscript(text: string): number {

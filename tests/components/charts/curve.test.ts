@@ -42,7 +42,14 @@ test('ticks are round, inside the span, and about as many as asked for', () => {
 test('clock ticks fall on round local times in a zone of half an hour', () => {
   const offsetMs = 5.5 * 3_600_000;
   const ticks = timeTicks(Date.UTC(2031, 0, 1, 0, 10), Date.UTC(2031, 0, 1, 6, 0), { count: 6, offsetMs });
-  expect(ticks.map((at) => new Date(at + offsetMs).toISOString().slice(11, 16))).toEqual(['06:00', '07:00', '08:00', '09:00', '10:00', '11:00']);
+  expect(ticks.map((at) => new Date(at + offsetMs).toISOString().slice(11, 16))).toEqual([
+    '06:00',
+    '07:00',
+    '08:00',
+    '09:00',
+    '10:00',
+    '11:00',
+  ]);
 });
 
 test('zooming keeps the point under the finger and stays within the data', () => {

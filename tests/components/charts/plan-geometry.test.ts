@@ -8,13 +8,18 @@ test('angles grow counter-clockwise from the arm at rest, which lies to the righ
 });
 
 test('each station has its tick on both sides, since either source meets either ball', () => {
-  const near = planLayout(demoRigWide).ticks.filter((tick) => tick.lane === 'near').map((tick) => ((tick.angleDeg % 360) + 360) % 360);
+  const near = planLayout(demoRigWide)
+    .ticks.filter((tick) => tick.lane === 'near')
+    .map((tick) => ((tick.angleDeg % 360) + 360) % 360);
   expect(near.map((angle) => angle.toFixed(2)).sort()).toEqual(['20.18', '200.18']);
 });
 
 test('keep-out arcs are drawn also half a turn further on, and all matter fits into the square', () => {
   const layout = planLayout(demoRigNarrow);
-  expect(layout.keepOut).toEqual([[-29, 29], [151, 209]]);
+  expect(layout.keepOut).toEqual([
+    [-29, 29],
+    [151, 209],
+  ]);
   expect(layout.orbit + layout.sourceRadius).toBeLessThanOrEqual(1);
 });
 
@@ -25,9 +30,18 @@ test('a station is recognised within half a degree, also a whole turn away', () 
 });
 
 test('a steady drift does not show in the reversals, and dwells left out make none', () => {
-  const dwell = (seq: number, station: string, value: number, used = true) => ({ seq, station, theta_rad: { value, u: 1e-6 }, samples: 100, used, why: used ? null : 'not good' });
+  const dwell = (seq: number, station: string, value: number) => ({
+    seq,
+    station,
+    theta_rad: { value, u: 1e-6 },
+    samples: 100,
+    used: true,
+    why: null,
+  });
   const drift = 5e-6;
-  const dwells = Array.from({ length: 8 }, (_, index) => dwell(index + 1, index % 2 === 0 ? 'near' : 'far', (index % 2 === 0 ? 1e-3 : -1e-3) + index * drift));
+  const dwells = Array.from({ length: 8 }, (_, index) =>
+    dwell(index + 1, index % 2 === 0 ? 'near' : 'far', (index % 2 === 0 ? 1e-3 : -1e-3) + index * drift),
+  );
   const points = reversalPoints(dwells);
   expect(points).toHaveLength(7);
   for (const point of points.slice(0, -1)) expect(point.rad).toBeCloseTo(2e-3, 12);

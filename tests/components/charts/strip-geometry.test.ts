@@ -18,7 +18,8 @@ describe('the lanes', () => {
 
   test('blocks do not overlap and keep the order of time', () => {
     const { blocks } = layoutStrip({ steps: plan, window: wholeWindow(plan), ...size });
-    for (let i = 1; i < blocks.length; i += 1) expect(blocks[i]?.x).toBeGreaterThanOrEqual((blocks[i - 1]?.x ?? 0) + (blocks[i - 1]?.width ?? 0) - 1.5);
+    for (let i = 1; i < blocks.length; i += 1)
+      expect(blocks[i]?.x).toBeGreaterThanOrEqual((blocks[i - 1]?.x ?? 0) + (blocks[i - 1]?.width ?? 0) - 1.5);
   });
 
   test('steps that measure nothing join into one stand, dwells never do', () => {

@@ -9,7 +9,9 @@ const plain = (text: string | null) => (text ?? '').replaceAll('\u202f', ' ');
 
 test('says in words what it shows: sides, span with zone, progress, the present', () => {
   const words = plain(stripSummary({ steps, timeZone, nowUtcMs, hasMeasured: true }));
-  expect(words).toBe('16 near dwells and 16 far dwells, from 21:58 to 05:40, Europe/Oslo, 7 h 42 min. 19 of 32 dwells done. Now: dwell at near. The solid line is the measured deflection.');
+  expect(words).toBe(
+    '16 near dwells and 16 far dwells, from 21:58 to 05:40, Europe/Oslo, 7 h 42 min. 19 of 32 dwells done. Now: dwell at near. The solid line is the measured deflection.',
+  );
 });
 
 test('counts dwells that are not good', () => {
@@ -31,7 +33,9 @@ test('offers a picture with its summary and a table with every step', () => {
 
 test('the arrow keys move the choice from step to step', () => {
   const chosen: string[] = [];
-  render(<SwingStrip steps={steps} timeZone={timeZone} title="North bench" selectedKey={steps[2]?.key} onSelect={(key) => chosen.push(key)} />);
+  render(
+    <SwingStrip steps={steps} timeZone={timeZone} title="North bench" selectedKey={steps[2]?.key} onSelect={(key) => chosen.push(key)} />,
+  );
   fireEvent.keyDown(screen.getByRole('button'), { key: 'ArrowRight' });
   fireEvent.keyDown(screen.getByRole('button'), { key: 'ArrowLeft' });
   expect(chosen).toEqual([steps[3]?.key, steps[1]?.key]);

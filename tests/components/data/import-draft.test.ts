@@ -1,24 +1,41 @@
 import { completeMapping, importReducer, noImport, type ImportState } from '@/components/data/import-draft';
 import { columnNames, previewRows } from '@/components/data/file-preview';
+import type { RememberedMapping } from '@/components/data/remembered-mapping';
 import type { ImportView } from '@/shared/contracts/data';
 
 const imported = (ambiguous: string[]): ImportView => ({
-  id: 'i1', runId: 'run-1', fileName: 'night.csv', state: 'received', bytes: 900, sha256: null,
+  id: 'i1',
+  runId: 'run-1',
+  fileName: 'night.csv',
+  state: 'received',
+  bytes: 900,
+  sha256: null,
   preview: {
-    columns: ['time', 'spot'].map((name, index) => ({ index, name, sample: '' })), rows: [], ambiguous,
+    columns: ['time', 'spot'].map((name, index) => ({ index, name, sample: '' })),
+    rows: [],
+    ambiguous,
     mapping: { delimiter: ';', decimal: ',', headerRow: true, timeColumn: 0, timeFormat: 'iso', valueColumn: 1, unit: 'rad' },
   },
 });
-const received = (ambiguous: string[], remembered: Parameters<typeof importReducer>[1] extends infer A ? (A extends { kind: 'received' } ? A['remembered'] : never) : never = null): ImportState =>
+const received = (ambiguous: string[], remembered: RememberedMapping | null = null): ImportState =>
   importReducer(noImport('deflection'), { kind: 'received', imported: imported(ambiguous), remembered });
-const change = (state: ImportState, draft: Partial<NonNullable<ImportState['draft']>>) => importReducer(state, { kind: 'changed', change: draft });
+const change = (state: ImportState, draft: Partial<NonNullable<ImportState['draft']>>) =>
+  importReducer(state, { kind: 'changed', change: draft });
 const mappingOf = (state: ImportState) => (state.draft === null ? null : completeMapping(state.draft));
 
 test('what the file does not tell stays open until the person states it', () => {
   const state = received(['unit', 'decimal']);
   expect(mappingOf(state)).toEqual({ mapping: null, missing: ['the decimal sign', 'the unit of the deflection'] });
   const stated = change(change(state, { unit: 'mm' }), { decimal: ',' });
-  expect(mappingOf(stated)?.mapping).toEqual({ delimiter: ';', decimal: ',', headerRow: true, timeColumn: 0, timeFormat: 'iso', valueColumn: 1, unit: 'mm' });
+  expect(mappingOf(stated)?.mapping).toEqual({
+    delimiter: ';',
+    decimal: ',',
+    headerRow: true,
+    timeColumn: 0,
+    timeFormat: 'iso',
+    valueColumn: 1,
+    unit: 'mm',
+  });
 });
 
 test('times without a zone must be called UTC by the person', () => {
@@ -31,12 +48,22 @@ test('times without a zone must be called UTC by the person', () => {
 test('elapsed time needs its beginning, and one column cannot be both', () => {
   const elapsed = change(received([]), { timeFormat: 'elapsed-s', elapsedFrom: '14.3.2031' });
   expect(mappingOf(elapsed)?.missing).toEqual(['when time 0 was']);
-  expect(mappingOf(change(elapsed, { elapsedFrom: '2031-03-14T01:00:00Z' }))?.mapping).toMatchObject({ elapsedFrom: '2031-03-14T01:00:00Z' });
+  expect(mappingOf(change(elapsed, { elapsedFrom: '2031-03-14T01:00:00Z' }))?.mapping).toMatchObject({
+    elapsedFrom: '2031-03-14T01:00:00Z',
+  });
   expect(mappingOf(change(received([]), { valueColumn: 0 }))?.missing).toEqual(['two different columns for time and deflection']);
 });
 
 test('the mapping of last time fills in what is open, but only for a file with the same columns', () => {
-  const { elapsedFrom: _, ...mapping } = { elapsedFrom: '', ...(imported([]).preview as NonNullable<ImportView['preview']>).mapping, unit: 'mm' as const };
+  const mapping: RememberedMapping['mapping'] = {
+    delimiter: ';',
+    decimal: ',',
+    headerRow: true,
+    timeColumn: 0,
+    timeFormat: 'iso',
+    valueColumn: 1,
+    unit: 'mm',
+  };
   const again = received(['unit'], { columns: ['time', 'spot'], mapping });
   expect(again.remembered).toBe(true);
   expect(mappingOf(again)?.mapping?.unit).toBe('mm');

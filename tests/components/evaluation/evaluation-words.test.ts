@@ -9,8 +9,14 @@ test('En within one agrees, beyond one disagrees', () => {
 });
 
 test('what was registered is said, and how the result differs from it', () => {
-  expect(registeredWords({ registered: true, method: 'equilibrium' }, protocol, 'deflection')).toEqual({ words: 'as registered', differs: false });
-  expect(registeredWords({ registered: false, method: 'equilibrium' }, protocol, 'spot')).toEqual({ words: 'not as registered: channel spot, registered deflection', differs: true });
+  expect(registeredWords({ registered: true, method: 'equilibrium' }, protocol, 'deflection')).toEqual({
+    words: 'as registered',
+    differs: false,
+  });
+  expect(registeredWords({ registered: false, method: 'equilibrium' }, protocol, 'spot')).toEqual({
+    words: 'not as registered: channel spot, registered deflection',
+    differs: true,
+  });
   expect(registeredWords({ registered: null, method: 'equilibrium' }, protocol, null).words).toBe('no evaluation was registered');
 });
 

@@ -10,7 +10,7 @@ const items = plannedItems(view, timeZone);
 
 test('the rest of the night follows the step that is going on, without a break and in full', () => {
   const rows = rowsAt(nowUtcMs);
-  const { steps } = nightPlan(view, rows, items);
+  const { steps } = nightPlan('running', rows, items);
   expect(steps).toHaveLength(timeline.items.length);
   const future = steps.filter((step) => step.phase === 'planned');
   expect(future[0]?.startUtcMs).toBeCloseTo(steps[rows.length - 1]?.endUtcMs ?? 0, 3);
@@ -18,16 +18,20 @@ test('the rest of the night follows the step that is going on, without a break a
 });
 
 test('a delay moves the rest of the night with it', () => {
-  const rows = rowsAt(nowUtcMs).map((row, index, all) => (index === all.length - 1 ? { ...row, plannedEndUtcMs: (row.plannedEndUtcMs ?? 0) + 240_000 } : row));
-  const { steps } = nightPlan(view, rows, items);
+  const rows = rowsAt(nowUtcMs).map((row, index, all) =>
+    index === all.length - 1 ? { ...row, plannedEndUtcMs: (row.plannedEndUtcMs ?? 0) + 240_000 } : row,
+  );
+  const { steps } = nightPlan('running', rows, items);
   expect((steps.at(-1)?.endUtcMs ?? 0) - timeline.endUtcMs).toBeCloseTo(240_000, 3);
 });
 
 test('a dwell cut short by a hold is to be done again; a run that is over has no future', () => {
-  const rows = rowsAt(nowUtcMs).map((row, index, all) => (index === all.length - 1 ? { ...row, endUtcMs: nowUtcMs, outcome: 'cut short' as const } : row));
-  const held = nightPlan({ ...view, state: 'held' }, rows, items).steps;
+  const rows = rowsAt(nowUtcMs).map((row, index, all) =>
+    index === all.length - 1 ? { ...row, endUtcMs: nowUtcMs, outcome: 'cut short' as const } : row,
+  );
+  const held = nightPlan('held', rows, items).steps;
   expect(held[rows.length]?.kind).toBe('dwell');
-  expect(nightPlan({ ...view, state: 'stopped' }, rows, items).steps).toHaveLength(rows.length);
+  expect(nightPlan('stopped', rows, items).steps).toHaveLength(rows.length);
 });
 
 test('a run that has not started has no plan yet', () => {
@@ -51,8 +55,14 @@ test("the prediction is laid on the channel's own zero", () => {
 
 test('the log is filtered by kind, station and outcome, and offers what occurs', () => {
   const rows = rowsAt(nowUtcMs).map((row, index) => (index === 6 ? { ...row, good: false } : row));
-  expect(filterChoices(rows)).toEqual({ kind: ['dwell', 'home', 'settle', 'swing'], station: ['far', 'inline', 'near'], outcome: ['done', 'running', 'not good'] });
-  expect(filterSteps(rows, { ...noFilter, kind: 'dwell', station: 'far' }).every((row) => row.kind === 'dwell' && row.station === 'far')).toBe(true);
+  expect(filterChoices(rows)).toEqual({
+    kind: ['dwell', 'home', 'settle', 'swing'],
+    station: ['far', 'inline', 'near'],
+    outcome: ['done', 'running', 'not good'],
+  });
+  expect(
+    filterSteps(rows, { ...noFilter, kind: 'dwell', station: 'far' }).every((row) => row.kind === 'dwell' && row.station === 'far'),
+  ).toBe(true);
   expect(filterSteps(rows, { ...noFilter, outcome: 'not good' }).map(outcomeOf)).toEqual(['done, not good']);
   expect(filterSteps(rows, { ...noFilter, outcome: 'running' })).toHaveLength(1);
 });

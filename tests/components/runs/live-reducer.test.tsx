@@ -5,8 +5,16 @@ import { readMessage } from '@/components/runs/use-live-run';
 import { beatAt, nowUtcMs, rowsAt, viewAt } from '../fixtures/run';
 
 const receive = (state: LiveState, ...messages: LiveMessage[]) => liveReducer(state, { kind: 'messages', messages });
-const event = (seq: number): LiveMessage => ({ type: 'event', receivedAtMs: 0, data: { seq, at: new Date(nowUtcMs).toISOString(), kind: 'mark', data: {}, prev: '', hash: '' } satisfies ChainedEvent });
-const snapshot = (change: Parameters<typeof viewAt>[1] = {}): LiveMessage => ({ type: 'snapshot', receivedAtMs: 0, data: viewAt(nowUtcMs, change) });
+const event = (seq: number): LiveMessage => ({
+  type: 'event',
+  receivedAtMs: 0,
+  data: { seq, at: new Date(nowUtcMs).toISOString(), kind: 'mark', data: {}, prev: '', hash: '' } satisfies ChainedEvent,
+});
+const snapshot = (change: Parameters<typeof viewAt>[1] = {}): LiveMessage => ({
+  type: 'snapshot',
+  receivedAtMs: 0,
+  data: viewAt(nowUtcMs, change),
+});
 
 describe('what arrives', () => {
   test('a snapshot carries the whole view, and an older one does not turn the screen back', () => {
@@ -37,7 +45,11 @@ describe('what arrives', () => {
   });
 
   test('samples sent again after a reconnect are not drawn twice, and another channel starts anew', () => {
-    const samples = (channelId: string, utcMs: number[]): LiveMessage => ({ type: 'samples', receivedAtMs: 0, data: { channelId, channel: 'deflection', unit: 'rad', utcMs, value: utcMs.map(() => 0.5) } });
+    const samples = (channelId: string, utcMs: number[]): LiveMessage => ({
+      type: 'samples',
+      receivedAtMs: 0,
+      data: { channelId, channel: 'deflection', unit: 'rad', utcMs, value: utcMs.map(() => 0.5) },
+    });
     const state = receive(noLive, samples('a', [1, 2, 3]), samples('a', [2, 3, 4]));
     expect(state.utcMs).toEqual([1, 2, 3, 4]);
     expect(receive(state, samples('b', [9])).utcMs).toEqual([9]);
@@ -45,7 +57,11 @@ describe('what arrives', () => {
 
   test('a long night is thinned at its old end only', () => {
     const utcMs = Array.from({ length: 20_000 }, (_, index) => index);
-    const state = receive(noLive, { type: 'samples', receivedAtMs: 0, data: { channelId: 'a', channel: 'deflection', unit: 'rad', utcMs, value: utcMs } });
+    const state = receive(noLive, {
+      type: 'samples',
+      receivedAtMs: 0,
+      data: { channelId: 'a', channel: 'deflection', unit: 'rad', utcMs, value: utcMs },
+    });
     expect(state.utcMs).toHaveLength(15_000);
     expect(state.utcMs.slice(-3)).toEqual([19_997, 19_998, 19_999]);
     expect(state.utcMs.slice(0, 3)).toEqual([0, 2, 4]);
@@ -59,7 +75,11 @@ describe('what arrives', () => {
 });
 
 test('the offset to the server comes from the quickest beat', () => {
-  const beats = [300, 20, 150].map((delayMs): LiveMessage => ({ type: 'beat', receivedAtMs: nowUtcMs - 5000 + delayMs, data: beatAt(nowUtcMs) }));
+  const beats = [300, 20, 150].map((delayMs): LiveMessage => ({
+    type: 'beat',
+    receivedAtMs: nowUtcMs - 5000 + delayMs,
+    data: beatAt(nowUtcMs),
+  }));
   expect(serverOffsetMs(receive(noLive, ...beats))).toBeCloseTo(4980, 0);
 });
 
@@ -81,6 +101,8 @@ describe('how old the newest word is', () => {
   });
 
   test('a rehearsal has no controller that could be silent', () => {
-    expect(linkAge({ ...heard, beat: beatAt(nowUtcMs, { link: 'closed', lastReplyAt: null }), hasController: false, nowMs: 10_100 })).toMatchObject({ grade: 'live', silent: null });
+    expect(
+      linkAge({ ...heard, beat: beatAt(nowUtcMs, { link: 'closed', lastReplyAt: null }), hasController: false, nowMs: 10_100 }),
+    ).toMatchObject({ grade: 'live', silent: null });
   });
 });

@@ -1,8 +1,23 @@
 import * as fc from 'fast-check';
 import { formatDeflection, formatDeflectionUncertain, formatDegrees } from '@/shared/lib/format-angle';
-import { formatAgo, formatCountdown, formatCountdownWide, formatDelay, formatDuration, formatTimeUncertainty } from '@/shared/lib/format-duration';
+import {
+  formatAgo,
+  formatCountdown,
+  formatCountdownWide,
+  formatDelay,
+  formatDuration,
+  formatTimeUncertainty,
+} from '@/shared/lib/format-duration';
 import { formatFixed, formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
-import { formatClock, formatClockWithZone, formatDay, formatLocalHonest, formatUtcHonest, formatUtcUncertain, zoneOffsetMs } from '@/shared/lib/format-time';
+import {
+  formatClock,
+  formatClockWithZone,
+  formatDay,
+  formatLocalHonest,
+  formatUtcHonest,
+  formatUtcUncertain,
+  zoneOffsetMs,
+} from '@/shared/lib/format-time';
 import { formatUncertain, parseUncertain, spokenUncertain } from '@/shared/lib/format-uncertain';
 
 const plain = (text: string) => text.replaceAll('\u202f', ' ');
@@ -10,7 +25,9 @@ const plain = (text: string) => text.replaceAll('\u202f', ' ');
 describe('a value with its uncertainty', () => {
   test('is written as CODATA 2022 prints G', () => {
     // NIST, CODATA 2022 recommended values: 6.674 30(15) x 10^-11 m3 kg-1 s-2
-    expect(formatUncertain({ value: 6.6743e-11, u: 0.00015e-11, unit: UNIT_OF_G })).toBe('6.674\u202f30(15)\u202f×\u202f10⁻¹¹\u202fm³\u202fkg⁻¹\u202fs⁻²');
+    expect(formatUncertain({ value: 6.6743e-11, u: 0.00015e-11, unit: UNIT_OF_G })).toBe(
+      '6.674\u202f30(15)\u202f×\u202f10⁻¹¹\u202fm³\u202fkg⁻¹\u202fs⁻²',
+    );
   });
 
   test.each([
@@ -64,7 +81,9 @@ describe('a value with its uncertainty', () => {
   });
 
   test('is spoken without brackets', () => {
-    expect(spokenUncertain({ value: 6.6743e-11, u: 0.00015e-11, unit: UNIT_OF_G })).toBe('6.67430 plus or minus 0.00015, times ten to the power of minus 11 m³ kg⁻¹ s⁻²');
+    expect(spokenUncertain({ value: 6.6743e-11, u: 0.00015e-11, unit: UNIT_OF_G })).toBe(
+      '6.67430 plus or minus 0.00015, times ten to the power of minus 11 m³ kg⁻¹ s⁻²',
+    );
   });
 });
 
