@@ -6,7 +6,7 @@ import {
   awaitReturn, becomeFailed, becomeFinished, becomeHeld, becomeStopped, beginHold, beginStop, carryOn, type GraveCause, noteGrave, noteInterruption,
   noteRefusedResume, noteRestart, requestHold, requestHoldAfterDwell, requestStop, resume, resumeRefusal, returnRefusal, takeAheadUnseen,
 } from './halting';
-import { hasRestarted, noteArmKey, noteEdge, noteInterlock, noteLease, noteLost, noteReady, noteRefusal, noteReset, noteStandstill, noteStrangeMotion, noteSupply } from './observations';
+import { hasRestarted, noteArmKey, noteEdge, noteInterlock, noteLease, noteLost, noteReady, noteRefusal, noteReset, noteStandstill, noteStranger, noteStrangeMotion, noteSupply } from './observations';
 import { type Advance, CHART_VERSION, type ChartState, type RunContext, type RunEvent, type RunSnapshot } from './run-context';
 import { askAgain, dropAhead, expectEnd, finishMotion, noteBegan, noteEnded, takeAhead } from './motions';
 import { chooseNext, endStanding, sendAhead, standingEndUtcMs } from './steps';
@@ -77,7 +77,7 @@ const refusedFor = (isFor: (told: Told) => boolean, ...codes: string[]) => (told
 const graveOf = (cause: GraveCause) => (draft: Draft) => noteGrave(draft, cause);
 
 /** Refusals that are over a moment later; all others say that the command is wrong or the controller is not fit. */
-const passing = ['past', 'far', 'warning', 'lease', 'session', 'stopped', 'busy', 'old', 'repeat', 'reused', 'not-renewed', 'no-session'];
+const passing = ['past', 'far', 'warning', 'lease', 'session', 'stopped', 'busy', 'old', 'repeat', 'reused', 'not-renewed', 'no-session', 'overtaken'];
 const MOST_RETRIES = 3;
 
 const explainRefusal: Writer = (draft) => {
@@ -86,9 +86,7 @@ const explainRefusal: Writer = (draft) => {
 const explainHomeFailure: Writer = (draft) => {
   if (draft.event.type === 'link.home-failed') draft.because('home-failed', `Homing gave up: ${draft.event.link.message}`);
 };
-const explainController: Writer = (draft) => {
-  if (draft.event.type === 'link.refused-controller') draft.because('controller-refused', draft.event.link.why);
-};
+const explainController: Writer = (draft) => void draft.because('controller-refused', draft.told('link.refused-controller').link.why);
 const explainStranger: Writer = (draft) => void draft.because('stopped-at-rig', 'The motion was ended at the rig, not by this run. Find out why, then resume.');
 const explainNoReturn: Writer = (draft) => {
   const why = returnRefusal(draft);
@@ -125,7 +123,7 @@ const underWay = {
   'link.reset': gravely(noteReset),
   'link.interlock': [...guarded(isOpenOrAbsent, gravely(noteInterlock)), { actions: act(noteInterlock) }],
   'link.supply': [...guarded(isOpenOrAbsent, gravely(noteSupply)), { actions: act(noteSupply) }],
-  'link.refused-controller': { target: 'failed' as const, actions: act(explainController) },
+  'link.refused-controller': interruptedBy(noteStranger),
   'server-restarted': interruptedBy(),
   'database-away': interruptedBy(),
 };
@@ -150,6 +148,7 @@ const comingToRest = {
   'link.motion-ended': [{ guard: isMine, actions: act(noteEnded) }],
   'link.homed': [{ guard: isMine, actions: act(noteEnded) }],
   'link.lost': { actions: act(noteLost) },
+  'link.refused-controller': { actions: act(noteStranger) },
   'link.interlock': { actions: act(noteInterlock) },
   'link.supply': { actions: act(noteSupply) },
 };
@@ -171,6 +170,7 @@ const machine = chart.createMachine({
           { guard: when((draft) => startRefusal(draft) !== null, noteReady), target: 'failed', actions: act(noteReady, explainStartRefusal) },
           { target: 'choosing', actions: act(noteReady, startRun) },
         ],
+        'link.refused-controller': { target: 'failed', actions: act(explainController) },
         deadline: fails('no-answer', 'The controller never answered. Check that it is powered and that the right port is chosen.'),
       },
     },
@@ -226,7 +226,7 @@ const machine = chart.createMachine({
     interrupted: {
       on: {
         ...underWay,
-        ...pick(comingToRest, 'link.motion-began', 'link.motion-ended', 'link.homed'),
+        ...pick(comingToRest, 'link.motion-began', 'link.motion-ended', 'link.homed', 'link.refused-controller'),
         'link.ready': [...guarded(bootedAnew, gravely(noteReset, noteReady)), { actions: act(noteReady, awaitReturn) }],
         'link.standstill': [
           { guard: when((draft) => returnRefusal(draft) === null, noteStandstill, takeAheadUnseen), target: 'choosing', actions: act(noteStandstill, takeAheadUnseen, carryOn) },
@@ -255,11 +255,9 @@ const machine = chart.createMachine({
         resume: [{ guard: when((draft) => resumeRefusal(draft) === null), target: 'choosing', actions: act(resume) }, { actions: act(noteRefusedResume) }],
         stop: { target: 'stopping', actions: act(requestStop) },
         'link.motion-began': { actions: act(noteStrangeMotion, (draft) => void draft.command((id) => ({ kind: 'hold', id }))) },
-        'link.lost': comingToRest['link.lost'],
+        ...pick(comingToRest, 'link.lost', 'link.refused-controller', 'link.interlock', 'link.supply'),
         'link.ready': [{ guard: bootedAnew, actions: act(noteReset, noteReady) }, { actions: act(noteReady) }],
         'link.reset': { actions: act(noteReset) },
-        'link.interlock': comingToRest['link.interlock'],
-        'link.supply': comingToRest['link.supply'],
         'server-restarted': { actions: act(noteRestart) },
       },
     },

@@ -83,7 +83,7 @@ export function noteInterruption(draft: Draft): void {
   if (event.type === 'database-away') draft.log('database-away', { gapS: (draft.nowUtcMs - sinceUtcMs) / 1000 });
   const before = context.interruption;
   context.interruption = { cause, sinceUtcMs: Math.min(before?.sinceUtcMs ?? sinceUtcMs, sinceUtcMs) };
-  draft.because(cause, interruptions[cause]);
+  draft.because(cause, event.type === 'link.refused-controller' ? event.link.why : interruptions[cause]);
 }
 
 /** A process that has just started knows nothing of the line yet. */
@@ -96,7 +96,7 @@ export function noteRestart(draft: Draft): void {
 }
 
 function causeOf(event: RunEvent): InterruptionCause | null {
-  if (event.type === 'link.lost') return 'link-lost';
+  if (event.type === 'link.lost' || event.type === 'link.refused-controller') return 'link-lost';
   if (event.type === 'link.lease-lapsed' || event.type === 'link.motion-ended') return 'lease-lapsed';
   return event.type === 'server-restarted' || event.type === 'database-away' ? event.type : null;
 }

@@ -33,6 +33,14 @@ export function noteLost(draft: Draft): void {
   draft.log('link-lost', { why: link.why });
 }
 
+/** What answers is not the controller: another device, another server's, or noise. The link goes on trying. */
+export function noteStranger(draft: Draft): void {
+  const { link } = draft.told('link.refused-controller');
+  draft.context.linkUp = false;
+  draft.context.linkDownSinceUtcMs ??= draft.stamp.utcMs;
+  draft.log('controller-refused', { why: link.why });
+}
+
 /** The position is gone; whatever moved is over. */
 export function noteReset(draft: Draft): void {
   const { event, context } = draft;

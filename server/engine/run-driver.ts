@@ -208,8 +208,10 @@ export class RunDriver {
     const id = `${this.runId}-${kind}-${Math.round(at.utcMs)}-${this.acted}`;
     this.halting += 1;
     const releaseDrivers = this.parts.start.rig.motion?.safeWhenFree === true;
+    // What the link tells while it sends comes after the hold, and is taken up after it.
+    this.inbox.push({ event: { type: kind, at, by, acted: id } });
     this.parts.link.send(kind === 'hold' ? { kind, id } : { kind, id, releaseDrivers });
-    this.enqueue({ event: { type: kind, at, by, acted: id } });
+    this.kick();
     return { ok: true, serverAtUtcMs: at.utcMs };
   }
 
@@ -225,6 +227,10 @@ export class RunDriver {
   private enqueue(item: Item): void {
     if (this.closed) return;
     this.inbox.push(item);
+    this.kick();
+  }
+
+  private kick(): void {
     if (!this.pumping) void this.pump();
   }
 

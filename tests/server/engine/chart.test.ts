@@ -133,7 +133,7 @@ const expected: Partial<Record<Name, Partial<Record<ChartState, ReturnType<typeo
   lease: { homing: interruption, moving: interruption },
   ready: { starting: always('homing') },
   standstill: { holding: always('held'), stopping: always('stopped'), interrupted: always('holding') },
-  stranger: Object.fromEntries([...underWay, 'starting', 'interrupted'].map((state) => [state, always('failed')])),
+  stranger: { ...Object.fromEntries(underWay.map((state) => [state, interruption])), starting: always('failed') },
   foreign: { homing: always('holding'), moving: always('holding'), standing: always('holding') },
 };
 
