@@ -37,9 +37,10 @@ export function Appearance() {
   );
 }
 
-/** A little of each theme in its own colours. */
+/** A little of each theme in its own colours; under the red lamp all in red, as one white patch undoes half an hour in the dark. */
 function Sample({ name }: { name: ThemeName }) {
-  const colors = themes[name];
+  const present = useTheme().name;
+  const colors = present === 'red' ? themes.red : themes[name];
   return (
     <View
       className="h-10 flex-row items-center gap-1.5 rounded-lg border px-2"

@@ -1,4 +1,4 @@
-import { useEffect, useRef } from 'react';
+import { useEffect, useRef, type RefObject } from 'react';
 import { View } from 'react-native';
 import { Empty } from '@/components/ui';
 import type { Step } from '@/shared/protocol/document';
@@ -17,7 +17,7 @@ interface Key {
 }
 
 /** The keyboard of the step list: arrows move the choice, Alt and arrows move the step, Delete, Enter for details. */
-function useListKeys(acted: () => void): (event: Key) => void {
+function useListKeys(): (event: Key) => void {
   const editor = useEditor();
   const { document, selected, mayWrite } = editor;
   const choose = (row: (at: number, last: number) => number) => {
@@ -46,20 +46,29 @@ function useListKeys(acted: () => void): (event: Key) => void {
     // Before the row sees it: a pressable takes Enter for itself.
     event.preventDefault();
     event.stopPropagation();
-    acted();
     act();
   };
+}
+
+/** Whether the focus was last given to something in the element: it stays true when what had it is taken off the page. */
+function useFocusWithin(host: RefObject<View | null>): RefObject<boolean> {
+  const within = useRef(false);
+  useEffect(() => {
+    const note = (event: FocusEvent) => {
+      within.current = (host.current as unknown as HTMLElement | null)?.contains(event.target as Node) === true;
+    };
+    window.addEventListener('focusin', note);
+    return () => window.removeEventListener('focusin', note);
+  }, [host]);
+  return within;
 }
 
 /** All steps of the draft, repeats with theirs inside. */
 export function StepList() {
   const { document, selected } = useEditor();
   const host = useRef<View>(null);
-  // A moved step is a new element, and the old one takes the focus away with it.
-  const byKey = useRef(false);
-  const onKeyDownCapture = useListKeys(() => {
-    byKey.current = true;
-  });
+  const hadFocus = useFocusWithin(host);
+  const onKeyDownCapture = useListKeys();
   const key = selected?.join('.') ?? '';
   useEffect(() => {
     const list = host.current as unknown as HTMLElement | null;
@@ -67,10 +76,10 @@ export function StepList() {
     if (row == null) return;
     // What was moved, doubled or chosen in the strip must not stay out of sight below the fold.
     row.scrollIntoView?.({ block: 'nearest' });
-    if (!byKey.current) return;
-    byKey.current = false;
-    row.focus();
-  }, [key, document]);
+    const { activeElement, body } = window.document;
+    // A moved step is a new element, and the old one takes the focus away with it.
+    if (list?.contains(activeElement) === true || (activeElement === body && hadFocus.current)) row.focus();
+  }, [key, document, hadFocus]);
   if (document.steps.length === 0) {
     return (
       <Empty title="No step yet" icon="protocols">

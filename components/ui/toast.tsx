@@ -14,7 +14,8 @@ interface ToastApi {
 }
 
 const ToastContext = createContext<ToastApi>({ show: () => undefined });
-const shownForMs = 10_000;
+/** Undo is offered for 10 s; a plain word may go sooner. */
+const shownForMs = { undo: 10_000, plain: 4_000 } as const;
 
 /** Says in passing that something was done, with Undo where it can be taken back. */
 export const useToast = (): ToastApi => useContext(ToastContext);
@@ -27,7 +28,7 @@ export function ToastProvider({ children }: { children: ReactNode }) {
 
   useEffect(() => {
     if (message === null) return undefined;
-    const timer = setTimeout(() => setMessage(null), shownForMs);
+    const timer = setTimeout(() => setMessage(null), message.undo === undefined ? shownForMs.plain : shownForMs.undo);
     return () => clearTimeout(timer);
   }, [message]);
 

@@ -1,0 +1,88 @@
+import { fireEvent, screen } from '@testing-library/react';
+import { useSession } from '@/components/api';
+import { LinkScreen } from '@/components/rigs/link-screen';
+import type { Role } from '@/shared/contracts/roles';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import { params, went } from '../support/fake-router';
+import { problem, settled, showInLab, startFakeLab, type FakeLab } from '../support/fake-lab';
+
+jest.mock('expo-router', () => jest.requireActual('../support/fake-router'));
+
+const live = {
+  condition: 'closed',
+  detail: '',
+  lastReplyAt: null,
+  roundTripMs: null,
+  discardedLines: 0,
+  positionKnown: false,
+  angleDeg: null,
+  moving: false,
+  interlockClosed: null,
+  supplyPresent: null,
+  driversOn: null,
+};
+const rig = {
+  id: 'rig-1',
+  name: 'North bench',
+  revision: 1,
+  link: { kind: 'simulated' },
+  live,
+  arm: null,
+  activeRun: null,
+  document: demoRigWide,
+  massSets: [],
+};
+
+function Page() {
+  return useSession().membership === null ? null : <LinkScreen />;
+}
+
+async function open(role: Role): Promise<FakeLab> {
+  const lab = startFakeLab(role);
+  lab.on('GET /labs/lab-1/rigs/rig-1', () => ({ body: rig, etag: '"1"' }));
+  params['rigId'] = 'rig-1';
+  went.length = 0;
+  await showInLab(<Page />);
+  await screen.findByText('Link of North bench');
+  await settled();
+  return lab;
+}
+
+test('a port that does not answer is said in a sentence, and what was typed stays', async () => {
+  const lab = await open('keeper');
+  lab.on('POST /labs/lab-1/rigs/rig-1/link/try', () => ({
+    body: { ok: false, detail: 'Nothing answered on /dev/pts/9 within 2 s.', firmware: null },
+  }));
+  fireEvent.click(screen.getByText('Serial line'));
+  fireEvent.change(screen.getByTestId('link-path'), { target: { value: '/dev/pts/9' } });
+  fireEvent.click(screen.getByTestId('try-link'));
+  await screen.findByText('Nothing answered on /dev/pts/9 within 2 s.');
+  expect(lab.requests('POST /labs/lab-1/rigs/rig-1/link/try')[0]?.body).toEqual({ kind: 'serial', path: '/dev/pts/9', baudRate: 115_200 });
+  expect(screen.getByTestId('link-path')).toHaveProperty('value', '/dev/pts/9');
+});
+
+test('the chosen line is stored and leads back to the rig', async () => {
+  const lab = await open('keeper');
+  lab.on('PUT /labs/lab-1/rigs/rig-1/link', () => ({ body: rig }));
+  fireEvent.click(screen.getByTestId('save-link'));
+  await screen.findByText(/is now reached over Simulated controller/);
+  expect(lab.requests('PUT /labs/lab-1/rigs/rig-1/link')[0]?.body).toEqual({ kind: 'simulated' });
+  expect(went).toEqual(['/rigs/rig-1']);
+});
+
+test('a line that this version does not open is refused in words at the page', async () => {
+  const lab = await open('owner');
+  lab.on('POST /labs/lab-1/rigs/rig-1/link/try', () =>
+    problem(422, 'not-yet', 'Only simulated and pseudo-terminal links are opened in this version.'),
+  );
+  fireEvent.click(screen.getByText('Serial line'));
+  fireEvent.change(screen.getByTestId('link-path'), { target: { value: '/dev/ttyUSB0' } });
+  fireEvent.click(screen.getByTestId('try-link'));
+  await screen.findByText('Only simulated and pseudo-terminal links are opened in this version.');
+});
+
+test('an operator is told who may change the link', async () => {
+  await open('operator');
+  expect(screen.queryByTestId('save-link')).toBeNull();
+  expect(screen.getByText(/Only a keeper or an owner may change a rig\./)).toBeTruthy();
+});
