@@ -46,6 +46,8 @@ export function ToastProvider({ children }: { children: ReactNode }) {
           <View
             key={message.id}
             className="ef-rise max-w-[560px] flex-row items-center gap-4 rounded-action border border-line bg-panel2 py-1 pl-4 pr-2"
+            // A plain word must not keep anybody from the buttons it lies over.
+            style={{ pointerEvents: undo === undefined ? 'none' : 'auto' }}
           >
             <Body className="shrink py-2">{message.text}</Body>
             {undo === undefined ? null : (
