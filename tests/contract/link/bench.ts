@@ -30,6 +30,8 @@ export interface BenchMaker {
   makeStranger(kind: 'babble' | 'other-major'): Promise<LinkBench>;
   /** How far the logged beginning of a timed move may lie from the one asked for, s. */
   beginToleranceS: number;
+  /** Length of the noise in a motion: with the pauses of a busy machine shorter than the lease, ms. */
+  noiseMs: number;
   dispose(): Promise<void>;
 }
 

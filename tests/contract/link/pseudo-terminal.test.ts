@@ -59,6 +59,7 @@ const maker: BenchMaker = {
   name: 'a pseudo-terminal',
   // Half of the round trip of a busy machine, and a wall clock read to 1 ms.
   beginToleranceS: 0.1,
+  noiseMs: 400,
   make: async () => {
     kept ??= await startController('--homed', '--warned');
     return benchOn(kept);

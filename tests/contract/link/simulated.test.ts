@@ -58,6 +58,7 @@ function babbler(clock: VirtualClock): ByteLineFactory {
 const maker: BenchMaker = {
   name: 'the simulated link',
   beginToleranceS: 0.0002,
+  noiseMs: 1_000,
   make: async () => benchOn(new VirtualClock(946_684_800_000, settle), {}),
   makeStranger: async (kind) => {
     const clock = new VirtualClock(946_684_800_000, settle);
