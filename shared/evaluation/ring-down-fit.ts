@@ -38,6 +38,9 @@ export interface DwellFit {
 /** Ringing that explains less than this many times what noise alone would is none. */
 const leastSignificance = 10;
 
+/** A clear ringing leaves less than this share of the motion unexplained. */
+const unexplainedShare = 0.1;
+
 /**
  * Fits all segments with one ω and γ. Without ringing, or with none that tells a frequency, both are held at `measured`.
  * Returns null when there is neither.
@@ -46,7 +49,7 @@ export function fitRingDown(data: readonly RingDownData[], start: RingDownStart 
   const segments = data.map(ringDownSegment);
   if (start !== null) {
     const fit = tryFit(segments, start);
-    if (fit !== null && tells(fit, data)) {
+    if (fit !== null && tells(fit, data, measured)) {
       const alphaCovariance = honestCovariance(fit);
       return {
         fit,
@@ -88,11 +91,18 @@ function tryFit(segments: readonly SeparableSegment[], start: RingDownStart): Se
   }
 }
 
-function tells(fit: SeparableFit, data: readonly RingDownData[]): boolean {
-  const u = Math.sqrt(at(fit.alphaCovariance, 0, 0));
-  if (!isOscillation(fit.alpha) || !(u < 0.05 * (fit.alpha[0] as number))) return false;
+/**
+ * Whether the fit found a ringing. A wandering zero can be fitted by a slow wave too, so a wave that explains less than most of
+ * the motion within the dwells is believed only where it agrees with the measured period, if there is one.
+ */
+function tells(fit: SeparableFit, data: readonly RingDownData[], measured: HeldOscillation | null): boolean {
+  const [omega] = fit.alpha as [number, number];
+  const u = Math.sqrt(at(honestCovariance(fit), 0, 0));
+  if (!isOscillation(fit.alpha) || !(u < 0.05 * omega)) return false;
   const withoutRinging = data.reduce((sum, one) => sum + straightResidual(one), 0);
-  return (withoutRinging - fit.ssr) / (2 * data.length + 2) > leastSignificance * fit.variance;
+  if ((withoutRinging - fit.ssr) / (2 * data.length + 2) <= leastSignificance * fit.variance) return false;
+  if (measured === null || fit.ssr < unexplainedShare * withoutRinging) return true;
+  return Math.abs(omega - measured.omega) <= 3 * Math.hypot(u, Math.sqrt(at(measured.covariance, 0, 0)));
 }
 
 function straightResidual({ tS, y, weight }: RingDownData): number {
