@@ -1,7 +1,7 @@
 import { acts, roles, type Act, type Role } from '@/shared/contracts/roles';
 
 /** The acts of the role matrix as a member of the lab would say them. */
-export const actWords: Record<Act, string> = {
+const actWords: Record<Act, string> = {
   'members.manage': 'Manage members and invitations',
   'lab.settings': 'Change the settings of the lab',
   'rig.edit': 'Change a rig, its link and its mass sets',

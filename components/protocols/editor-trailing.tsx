@@ -7,7 +7,7 @@ import { SaveChip } from './save-state';
 import type { SaveStatus } from './save-reducer';
 
 /** Which revision the draft becomes, as `rev 7 draft`, or which it is. */
-export const draftWords = (protocol: ProtocolView): string =>
+const draftWords = (protocol: ProtocolView): string =>
   protocol.draftDiffers ? `rev ${(protocol.latestRevision ?? 0) + 1} draft` : `rev ${protocol.latestRevision ?? 0}`;
 
 interface EditorTrailingProps {

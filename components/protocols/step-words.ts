@@ -45,7 +45,7 @@ export const stepIcons: Record<StepKind, IconName> = {
   repeat: 'repeat',
 };
 
-export const targetWords = (to: SwingTarget): string => (typeof to === 'string' ? to : formatDegrees(to.angle_deg));
+const targetWords = (to: SwingTarget): string => (typeof to === 'string' ? to : formatDegrees(to.angle_deg));
 
 function repeatTitle({ times, until }: RepeatStep): string {
   if (times !== undefined) return `Repeat ${times === 1 ? 'once' : `${times} times`}`;

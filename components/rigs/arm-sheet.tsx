@@ -78,7 +78,7 @@ export function ArmSheet({ rig, onClose }: { rig: RigView; onClose: () => void }
 }
 
 /** The cautions, one line each. */
-export function Cautions() {
+function Cautions() {
   return (
     <View className="gap-2.5 rounded-panel border border-line p-4">
       {cautions.map((caution) => (

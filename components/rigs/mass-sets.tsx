@@ -42,7 +42,7 @@ export function MassSets({ rig }: { rig: RigView }) {
 }
 
 /** The sources of a mass set on one line. */
-export function sourcesLine(sources: MassSetView['sources']): string {
+function sourcesLine(sources: MassSetView['sources']): string {
   if (sources.shape === 'none') return 'empty control: no sources';
   const row = (label: string, quantity: { value: number; u: number; unit: string } | undefined) =>
     quantity === undefined ? null : `${label} ${quantityLine({ path: '', group: '', label: '', kind: 'quantity', ...quantity })}`;

@@ -1,2 +1,2 @@
 export { ThemeProvider, useTheme } from './theme-provider';
-export { themeNames, themes, type ThemeColors, type ThemeName } from './tokens';
+export { themes, type ThemeColors, type ThemeName } from './tokens';

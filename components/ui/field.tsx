@@ -12,7 +12,7 @@ interface AroundProps {
 }
 
 /** Label above, hint and error below; the input points at both. */
-export function FieldFrame({ id, label, hint, error, children }: AroundProps) {
+function FieldFrame({ id, label, hint, error, children }: AroundProps) {
   return (
     <View className="gap-1.5">
       <label htmlFor={id} className="font-sans text-15 font-medium text-text">

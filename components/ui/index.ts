@@ -1,6 +1,6 @@
 export { Button, IconButton, type ButtonKind, type ButtonProps } from './button';
 export { Chip } from './chip';
-export { Field, FieldFrame, Select, type FieldProps } from './field';
+export { Field, Select, type FieldProps } from './field';
 export { FileButton } from './file-button';
 export { FormField, showProblem } from './form-field';
 export { Icon, type IconName } from './icon';
@@ -10,7 +10,7 @@ export { fileNameOf, saveTextFile } from './save-file';
 export { Screen } from './screen';
 export { Sheet } from './sheet';
 export { Empty, Loading, Offline, ProblemNotice } from './states';
-export { Check, Switch } from './switch';
+export { Check } from './switch';
 export { Tabs } from './tabs';
 export { Body, Heading, Label, Num, type Tone } from './text';
 export { ToastProvider, useToast } from './toast';

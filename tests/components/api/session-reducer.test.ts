@@ -13,24 +13,31 @@ const unknown: SessionState = { kind: 'unknown' };
 const inLab = (labId: string | null): SessionState => ({ kind: 'signed-in', me, labId });
 const expired: SessionState = { kind: 'expired', me, labId: 'b' };
 
-test.each<[string, SessionState, SessionEvent, SessionState]>([
-  ['nobody is signed in', unknown, { kind: 'asked', me: null, rememberedLabId: null }, { kind: 'signed-out' }],
-  ['the remembered lab is taken', unknown, { kind: 'asked', me, rememberedLabId: 'b' }, inLab('b')],
-  ['a remembered lab one has left is not', unknown, { kind: 'asked', me, rememberedLabId: 'z' }, inLab('a')],
-  [
-    'without a lab there is none',
-    unknown,
-    { kind: 'asked', me: nobody, rememberedLabId: 'a' },
-    { kind: 'signed-in', me: nobody, labId: null },
-  ],
-  ['a refused request keeps who was there', inLab('b'), { kind: 'refused' }, expired],
-  ['a second refusal changes nothing', expired, { kind: 'refused' }, expired],
-  ['a refusal before anything is known means signed out', unknown, { kind: 'refused' }, { kind: 'signed-out' }],
-  ['signing in again leads back to the same lab', expired, { kind: 'signed-in', me, rememberedLabId: 'a' }, inLab('b')],
-  ['signing out forgets', inLab('a'), { kind: 'signed-out' }, { kind: 'signed-out' }],
-  ['another lab is chosen', inLab('a'), { kind: 'lab-chosen', labId: 'b' }, inLab('b')],
-  ['a lab can be chosen only when signed in', expired, { kind: 'lab-chosen', labId: 'a' }, expired],
-])('%s', (_, before, event, after) => {
+const cases: readonly { is: string; before: SessionState; event: SessionEvent; after: SessionState }[] = [
+  { is: 'nobody is signed in', before: unknown, event: { kind: 'asked', me: null, rememberedLabId: null }, after: { kind: 'signed-out' } },
+  { is: 'the remembered lab is taken', before: unknown, event: { kind: 'asked', me, rememberedLabId: 'b' }, after: inLab('b') },
+  { is: 'a remembered lab one has left is not', before: unknown, event: { kind: 'asked', me, rememberedLabId: 'z' }, after: inLab('a') },
+  {
+    is: 'without a lab there is none',
+    before: unknown,
+    event: { kind: 'asked', me: nobody, rememberedLabId: 'a' },
+    after: { kind: 'signed-in', me: nobody, labId: null },
+  },
+  { is: 'a refused request keeps who was there', before: inLab('b'), event: { kind: 'refused' }, after: expired },
+  { is: 'a second refusal changes nothing', before: expired, event: { kind: 'refused' }, after: expired },
+  { is: 'a refusal before anything is known means signed out', before: unknown, event: { kind: 'refused' }, after: { kind: 'signed-out' } },
+  {
+    is: 'signing in again leads back to the same lab',
+    before: expired,
+    event: { kind: 'signed-in', me, rememberedLabId: 'a' },
+    after: inLab('b'),
+  },
+  { is: 'signing out forgets', before: inLab('a'), event: { kind: 'signed-out' }, after: { kind: 'signed-out' } },
+  { is: 'another lab is chosen', before: inLab('a'), event: { kind: 'lab-chosen', labId: 'b' }, after: inLab('b') },
+  { is: 'a lab can be chosen only when signed in', before: expired, event: { kind: 'lab-chosen', labId: 'a' }, after: expired },
+];
+
+test.each(cases)('$is', ({ before, event, after }) => {
   expect(sessionReducer(before, event)).toEqual(after);
 });
 

@@ -25,7 +25,10 @@ async function open(role: Role): Promise<FakeLab> {
 test('an owner invites by e-mail into a role; a refusal stands at its field and the address stays', async () => {
   const lab = await open('owner');
   lab.on('POST /labs/lab-1/invitations', () =>
-    problem(409, 'already-exists', 'Bram is a member already.', [{ path: 'email', message: 'bram@quillfen.example is a member already' }]),
+    problem(409, 'already-exists', {
+      detail: 'Bram is a member already.',
+      errors: [{ path: 'email', message: 'bram@quillfen.example is a member already' }],
+    }),
   );
   fireEvent.click(screen.getByTestId('invite'));
   await userEvent.type(screen.getByLabelText('E-mail'), 'bram@quillfen.example');

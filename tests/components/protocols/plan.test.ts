@@ -56,17 +56,24 @@ test('a miniature is drawn from the same plan with fewer points', () => {
   expect(mini.predicted?.x.length).toBeLessThan(400);
 });
 
-test.each<[Step, number | null, string, string]>([
-  [{ kind: 'swing', to: 'near' }, 10, 'Swing to near', 'plain · 10\u202fs'],
-  [{ kind: 'swing', to: { angle_deg: -12.5 } }, null, 'Swing to −12.50°', 'plain'],
-  [{ kind: 'dwell', beat_periods: 2 }, 830, 'Dwell', 'beat of 2 T · 13\u202fmin 50\u202fs'],
-  [{ kind: 'dwell', periods: 1.5 }, null, 'Dwell', '1.5 T'],
-  [{ kind: 'repeat', times: 16, steps: pair }, null, 'Repeat 16 times', ''],
-  [{ kind: 'repeat', until: { localTime: '06:30' }, steps: pair }, null, 'Repeat until 06:30', ''],
-  [{ kind: 'wait', until: { localTime: '22:00', ifPast: 'hold' } }, null, 'Wait until 22:00', 'hold if past'],
-  [{ kind: 'mark', label: 'lights off' }, 0, 'Mark “lights off”', ''],
-  [{ kind: 'settle', for_s: 600, label: 'creep' }, 600, 'Settle', '10\u202fmin · “creep”'],
-])('%j reads as people would say it', (step, durationS, title, under) => {
+const reads: readonly { step: Step; durationS: number | null; title: string; under: string }[] = [
+  { step: { kind: 'swing', to: 'near' }, durationS: 10, title: 'Swing to near', under: 'plain · 10\u202fs' },
+  { step: { kind: 'swing', to: { angle_deg: -12.5 } }, durationS: null, title: 'Swing to −12.50°', under: 'plain' },
+  { step: { kind: 'dwell', beat_periods: 2 }, durationS: 830, title: 'Dwell', under: 'beat of 2 T · 13\u202fmin 50\u202fs' },
+  { step: { kind: 'dwell', periods: 1.5 }, durationS: null, title: 'Dwell', under: '1.5 T' },
+  { step: { kind: 'repeat', times: 16, steps: pair }, durationS: null, title: 'Repeat 16 times', under: '' },
+  { step: { kind: 'repeat', until: { localTime: '06:30' }, steps: pair }, durationS: null, title: 'Repeat until 06:30', under: '' },
+  {
+    step: { kind: 'wait', until: { localTime: '22:00', ifPast: 'hold' } },
+    durationS: null,
+    title: 'Wait until 22:00',
+    under: 'hold if past',
+  },
+  { step: { kind: 'mark', label: 'lights off' }, durationS: 0, title: 'Mark “lights off”', under: '' },
+  { step: { kind: 'settle', for_s: 600, label: 'creep' }, durationS: 600, title: 'Settle', under: '10\u202fmin · “creep”' },
+];
+
+test.each(reads)('$title reads as people would say it', ({ step, durationS, title, under }) => {
   expect(stepTitle(step)).toBe(title);
   expect(stepUnder(step, durationS)).toBe(under);
 });

@@ -21,16 +21,21 @@ export interface Answer {
 }
 type Handler = (asked: Asked) => Answer;
 
-export const labId = 'lab-1';
+const labId = 'lab-1';
 export const memberAs = (role: Role): Me => ({
   user: { id: 'u1', name: 'Ada Thornfield', email: 'ada@quillfen.example' },
   memberships: [{ labId, labName: 'Quillfen Gravity Laboratory', timeZone: 'Europe/Oslo', role }],
   sessionExpiresAt: '2031-03-20T00:00:00Z',
 });
 
-export const problem = (status: number, code: string, detail: string, errors?: { path: string; message: string }[]): Answer => ({
+/** The answer that refuses, as RFC 9457 has it; status, code, sentence and, where a field is meant, its errors. */
+export const problem = (
+  status: number,
+  code: string,
+  refusal: string | { detail: string; errors: { path: string; message: string }[] },
+): Answer => ({
   status,
-  body: { type: `/problems/${code}`, title: code, status, code, detail, ...(errors === undefined ? {} : { errors }) },
+  body: { type: `/problems/${code}`, title: code, status, code, ...(typeof refusal === 'string' ? { detail: refusal } : refusal) },
 });
 
 export interface FakeLab {
