@@ -12,7 +12,9 @@ import { addMember, createUser } from '@/server/store/people';
 import { createLab } from '@/server/store/labs';
 import { createRig } from '@/server/store/rigs';
 import type { Role } from '@/shared/contracts/roles';
+import type { RunState, RunView } from '@/shared/contracts/runs';
 import { roles } from '@/shared/contracts/roles';
+import type { ProtocolDocument } from '@/shared/protocol/document';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import type { TestDatabase } from './database';
 
@@ -38,6 +40,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
 /** Something that lives on when a server ends: the clock and the turntables. */
 export class World {
   private server: BuiltServer | null = null;
+  private databaseAway = false;
   private readonly controllers = new Map<string, SimulatedController>();
   readonly clock: VirtualClock;
 
@@ -65,8 +68,17 @@ export class World {
     this.server = server;
   }
 
+  /** While the database is away the engine waits for it on this very clock, so time must go on without its being idle. */
+  async withoutDatabase(work: () => Promise<void>): Promise<void> {
+    this.databaseAway = true;
+    await work().finally(() => {
+      this.databaseAway = false;
+    });
+  }
+
   private async settle(): Promise<void> {
-    await (this.server?.services.idle() ?? new Promise<void>((resolve) => void setImmediate(resolve)));
+    if (this.server !== null && !this.databaseAway) return this.server.services.idle();
+    for (let turn = 0; turn < 20; turn += 1) await new Promise<void>((resolve) => void setImmediate(resolve));
   }
 }
 
@@ -139,12 +151,56 @@ export class LabServer {
     return request(this.built.app)[verb](`/api${path}`).set('Cookie', this.cookie(who)).set('Sec-Fetch-Site', 'same-origin').set('Idempotency-Key', randomUUID());
   }
 
+  /** Makes a protocol and issues its first revision on the demo rig. Returns its id. */
+  async issue(document: ProtocolDocument): Promise<string> {
+    const made = await this.as('operator', 'POST', `/labs/${demoIds.lab}/protocols`).send({ document }).expect(201);
+    await this.as('operator', 'POST', `/labs/${demoIds.lab}/protocols/${made.body.id}/revisions`).set('If-Match', made.headers.etag as string).send({ rigId: demoIds.rig }).expect(201);
+    return made.body.id as string;
+  }
+
+  /** Asks to start the first revision of a protocol on the demo rig. */
+  askStart(protocolId: string, change: object = {}): request.Test {
+    return this.as('operator', 'POST', `/labs/${demoIds.lab}/runs`).send({ rigId: demoIds.rig, protocolId, revision: 1, massSetId: demoIds.massSet, ...change });
+  }
+
+  /** Arms the rig and starts a run of a new protocol. Returns the id of the run. */
+  async run(document: ProtocolDocument): Promise<string> {
+    const protocolId = await this.issue(document);
+    await this.arm();
+    const answer = await this.askStart(protocolId).expect(201);
+    return answer.body.id as string;
+  }
+
+  async view(runId: string): Promise<RunView> {
+    return (await this.as('viewer', 'GET', `/labs/${demoIds.lab}/runs/${runId}`).expect(200)).body as RunView;
+  }
+
+  /** Lets time pass until the engine shows the run in one of these states. */
+  async until(runId: string, ...states: RunState[]): Promise<RunView> {
+    const there = () => states.includes(this.services.supervisor.driverOf(runId)?.facts().state ?? 'finished');
+    await this.advance(3_600_000, there);
+    const view = await this.view(runId);
+    if (!states.includes(view.state)) throw new Error(`the run is ${view.state}: ${view.reason}`);
+    return view;
+  }
+
+  intervene(runId: string, what: 'hold' | 'hold-after-dwell' | 'resume' | 'stop', who: Role = 'operator', body: object = {}): request.Test {
+    return this.as(who, 'POST', `/labs/${demoIds.lab}/runs/${runId}/${what}`).send(body);
+  }
+
   /** Arms the demo rig until `hours` from now. */
   async arm(hours = 16, rigId: string = demoIds.rig): Promise<void> {
     const until = new Date(this.clock.utcMs() + hours * 3_600_000).toISOString();
     await this.as('operator', 'POST', `/labs/${demoIds.lab}/rigs/${rigId}/arm`).send({ name: 'Ilse Marrowby', until, cautionsRead: true }).expect(201);
   }
 }
+
+/** Home, then near and far for half a minute each: over in a few minutes. */
+export const quickProtocol = (change: Partial<ProtocolDocument> = {}): ProtocolDocument => ({
+  formatVersion: 1, name: 'There and back',
+  steps: [{ kind: 'home' }, { kind: 'swing', to: 'near' }, { kind: 'dwell', for_s: 30 }, { kind: 'swing', to: 'far' }, { kind: 'dwell', for_s: 30 }],
+  ...change,
+});
 
 /** A second lab with a member of each role, who are strangers to the demo lab, and a rig without a line of its own. */
 export async function foreignLab(database: TestDatabase, nowUtcMs: number): Promise<{ labId: string; rigId: string; userOf: Record<Role, string> }> {
