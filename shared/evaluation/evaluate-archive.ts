@@ -17,7 +17,7 @@ import type { Known } from './free-oscillator';
 import { gSystem } from './g-system';
 import { evaluationPlan, type EvaluationOptions, type EvaluationPlan } from './registration';
 import type { DwellResult, EvaluationResult, FitCurve } from './result';
-import { isMember } from './reversal';
+import { isMember, type Reversal } from './reversal';
 import { centreOf } from './ring-down-fit';
 import { NoSolutionError, solveG } from './solve-g';
 
@@ -52,7 +52,7 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     decayTime_s: free.decayTime === null ? null : withU(free.decayTime),
     kappa_N_m: kappa,
     dwells: dwellResults(analysis),
-    reversal_rad: reversal === null ? null : { value: reversal.value, u: reversal.known?.u ?? null, count: reversal.count },
+    reversal_rad: reversalResult(archive.rig, reversal),
     G: solution === null ? null : { value: solution.bigG, u, degreesOfFreedom: finiteOrNull(budget?.degreesOfFreedom) },
     relativeU: solution === null || u === null || solution.bigG === 0 ? null : u / Math.abs(solution.bigG),
     codata: {
@@ -61,9 +61,17 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     },
     budget: budget?.lines ?? null,
     monteCarlo: null,
+    ...(archive.steps.some(({ kind }) => kind === 'swing') ? {} : { pretend: null }),
     warnings: [...archive.warnings, ...warningsOf(archive.rig, analysis)],
   };
   return { result, curves: curvesOf(analysis) };
+}
+
+/** An empty control has a further key for its test of equivalence to zero, which is not built yet. */
+function reversalResult(rig: RigDocument, reversal: Reversal | null): EvaluationResult['reversal_rad'] {
+  if (reversal === null) return null;
+  const difference = { value: reversal.value, u: reversal.known?.u ?? null, count: reversal.count };
+  return rig.sources.shape === 'none' ? { ...difference, equivalence: null } : difference;
 }
 
 const withU = ({ value, u }: Known) => ({ value, u });

@@ -129,8 +129,16 @@ describe('what cannot be computed is null', () => {
     const result = evaluateNight({ ...wide, rig, reading: (_angle, t) => 3e-5 + 1e-9 * t }).result;
     expect(result).toMatchObject({ G: null, budget: null });
     expect(result.reversal_rad?.value).toBeCloseTo(0, 12);
-    expect(result.reversal_rad?.count).toBe(7);
+    expect(result.reversal_rad).toMatchObject({ count: 7, equivalence: null });
     expect(result.period_s).toEqual({ value: 420, u: 0 });
+  });
+
+  test('a still night has neither difference nor G, and as yet no pretended one', () => {
+    const still = evaluateNight({ ...wide, anglesDeg: [90, 90, 90, 90], reading: () => 1e-4 }, {}, (records) => ({
+      ...records,
+      steps: records.steps.filter(({ kind }) => kind === 'dwell'),
+    }));
+    expect(still.result).toMatchObject({ reversal_rad: null, G: null, pretend: null });
   });
 
   test('a zero that wanders is not taken for ringing', () => {
