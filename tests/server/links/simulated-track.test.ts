@@ -11,7 +11,7 @@ test.each([
   [10, 6, 2, 4.472135955],
   [18, 6, 2, 6],
   [90, 10, 5, 11],
-])('%f steps at %f and %f take %f s', (steps, speed, acceleration, awaitedS) => {
+])('%f steps at %f and %f take %f s', (...[steps, speed, acceleration, awaitedS]) => {
   expect(durationS(steps, speed, acceleration)).toBeCloseTo(awaitedS, 9);
   expect(durationS(-steps, speed, acceleration)).toBeCloseTo(awaitedS, 9);
 });
