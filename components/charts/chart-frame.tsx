@@ -4,8 +4,8 @@ import type { ThemeColors } from '@/components/theme';
 import { formatFixed } from '@/shared/lib/format-number';
 import { niceTicks } from './ticks';
 
-export const numberFont = 'Atkinson Hyperlegible Mono';
-export const wordFont = 'Atkinson Hyperlegible Next';
+const numberFont = 'Atkinson Hyperlegible Mono';
+const wordFont = 'Atkinson Hyperlegible Next';
 
 export interface FrameBox {
   left: number;

@@ -24,7 +24,7 @@ const betweenPx = 30;
 const heightPx = top + mainPx + betweenPx + residualPx + 40;
 
 /** Root mean square of data minus fit, rad. */
-export function residualRms(curve: FitCurve): number {
+function residualRms(curve: FitCurve): number {
   const squares = curve.dataRad.map((y, index) => (y - (curve.modelRad[index] as number)) ** 2);
   return Math.sqrt(squares.reduce((sum, square) => sum + square, 0) / Math.max(1, squares.length));
 }

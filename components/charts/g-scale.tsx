@@ -30,7 +30,9 @@ export function GScale({ value, u, codata, other }: GScaleProps) {
   const from = middle - half - reach / 4;
   const to = middle + half + reach / 4;
   const x = (g: number) => edgePx + ((g - from) / (to - from)) * (width - 2 * edgePx);
-  const ticks = niceTicks(from * 1e11, to * 1e11, width < 420 ? 4 : 6);
+  const round = niceTicks(from * 1e11, to * 1e11, width < 420 ? 4 : 6);
+  // A label needs 20 px to either side of its tick.
+  const ticks = { ...round, values: round.values.filter((tick) => x(tick / 1e11) >= 20 && x(tick / 1e11) <= width - 20) };
   const band = (k: number, opacity: number, height: number) =>
     u === null ? null : (
       <Rect

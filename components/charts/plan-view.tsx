@@ -105,7 +105,7 @@ function arc(px: ToPx, radius: number, [fromDeg, toDeg]: [number, number]): stri
 }
 
 /** The plan in words: where the sources stand, and the arcs kept out. */
-export function planWords(rig: RigDocument, angleDeg: number | null, old = false): string {
+function planWords(rig: RigDocument, angleDeg: number | null, old = false): string {
   const keepOut = (rig.motion?.keepOut ?? []).map(([from, to]) => `${formatDegrees(from, 0)} to ${formatDegrees(to, 0)}`).join(', ');
   const station = angleDeg === null ? null : stationNear(rig, angleDeg);
   const where =

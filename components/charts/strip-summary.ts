@@ -37,7 +37,7 @@ export function stripSummary({ steps, timeZone, nowUtcMs, hasMeasured }: Summary
 }
 
 /** A step in a few words: `dwell at near`, `swing to far`, `home`. */
-export function stepWords(step: { kind: string; station: string; label?: string }): string {
+function stepWords(step: { kind: string; station: string; label?: string }): string {
   const place =
     step.station === ''
       ? ''

@@ -3,7 +3,7 @@
 const roundSteps = [1, 2, 2.5, 5, 10];
 
 /** A round step such that about `count` of them fill the span. */
-export function niceStep(span: number, count: number): number {
+function niceStep(span: number, count: number): number {
   if (!(span > 0)) return 1;
   const raw = span / Math.max(1, count);
   const decade = 10 ** Math.floor(Math.log10(raw));
@@ -18,19 +18,4 @@ export function niceTicks(from: number, to: number, count: number): { values: nu
     values.push(index * step === 0 ? 0 : index * step);
   const twoDigits = Math.abs(step / 10 ** Math.floor(Math.log10(step)) - 2.5) < 1e-9;
   return { values, decimals: Math.max(0, -Math.floor(Math.log10(step) + 1e-9) + (twoDigits ? 1 : 0)) };
-}
-
-const timeStepsS = [1, 2, 5, 10, 15, 30, 60, 120, 300, 600, 900, 1800, 3600, 7200, 10_800, 21_600, 43_200, 86_400];
-
-/**
- * Instants on round times of day within [fromUtcMs, toUtcMs]. `offsetMs` is the local time's offset from UTC at the
- * start, so that ticks fall on round local hours also in zones of half an hour.
- */
-export function timeTicks(fromUtcMs: number, toUtcMs: number, options: { count: number; offsetMs: number }): number[] {
-  const raw = (toUtcMs - fromUtcMs) / 1000 / Math.max(1, options.count);
-  const stepMs = (timeStepsS.find((step) => step >= raw) ?? Math.ceil(raw / 86_400) * 86_400) * 1000;
-  const ticks: number[] = [];
-  const first = Math.ceil((fromUtcMs + options.offsetMs) / stepMs) * stepMs - options.offsetMs;
-  for (let at = first; at <= toUtcMs; at += stepMs) ticks.push(at);
-  return ticks;
 }

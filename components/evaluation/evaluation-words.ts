@@ -51,8 +51,3 @@ const methods: Record<EvaluationResult['method'], string> = {
   modulation: 'modulation method',
 };
 export const methodWords = (method: EvaluationResult['method']): string => methods[method];
-
-/** Dwells used of all. */
-export function dwellCount(result: Pick<EvaluationResult, 'dwells'>): { used: number; all: number } {
-  return { used: result.dwells.filter((dwell) => dwell.used).length, all: result.dwells.length };
-}

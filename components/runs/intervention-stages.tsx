@@ -60,11 +60,13 @@ export function InterventionStages({ stages, timeZone }: StagesProps) {
 function Stage({ state, title, detail }: { state: StageState; title: string; detail: string }) {
   const mark = marks[state];
   return (
-    <View className={`min-w-0 flex-1 flex-row items-start gap-1.5 ${state === 'waiting' ? 'opacity-70' : ''}`}>
+    <View
+      className={`min-w-0 flex-row items-start gap-1.5 ${detail === '' && title === 'Sent' ? 'flex-none pr-2' : 'flex-1'} ${state === 'waiting' ? 'opacity-70' : ''}`}
+    >
       <Icon name={mark.icon} size={16} tone={mark.tone} />
       <View className="min-w-0 shrink">
         <Label tone={state === 'waiting' ? 'dim' : 'text'}>{title}</Label>
-        {detail === '' ? null : <Label className="font-mono tabular">{detail}</Label>}
+        {detail === '' ? null : <Label className="whitespace-nowrap font-mono tabular">{detail}</Label>}
       </View>
     </View>
   );

@@ -52,7 +52,7 @@ function TimeLeft({ view, timeZone, serverNowMs, lost }: RunHeadProps) {
   const sinceMs = heldSince(view) ?? view.current?.startUtcMs ?? null;
   const seconds =
     deadlineMs !== null ? (deadlineMs - serverNowMs) / 1000 : sinceMs === null ? null : Math.max(0, (serverNowMs - sinceMs) / 1000);
-  const kind = view.current?.kind ?? 'step';
+  const kind = view.current?.kind === 'dwell' || view.current?.kind === 'swing' ? view.current.kind : 'step';
   const what =
     deadlineMs !== null ? `left in this ${kind}` : !counting && sinceMs !== null ? 'since it came to rest' : 'since this step began';
   const clock = (utcMs: number) => formatClock(utcMs, { timeZone });

@@ -47,7 +47,7 @@ export function RunScreen() {
 }
 
 /** The live part, with its acts always at the bottom. */
-export function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
+function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
   const { labId, timeZone } = useLab();
   const wide = useWide();
   const now = useNow(500);

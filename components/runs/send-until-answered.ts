@@ -1,6 +1,6 @@
 /** When a hold or stop is sent again until it is answered, ms after the tap: quickly at first, then ever more seldom. */
-export const attemptAtMs: readonly number[] = [0, 300, 800, 1800, 3800, 7800, 15_800, 29_000];
-export const giveUpAfterMs = 30_000;
+const attemptAtMs: readonly number[] = [0, 300, 800, 1800, 3800, 7800, 15_800, 29_000];
+const giveUpAfterMs = 30_000;
 
 /** What an attempt came to: a final answer, or none that counts (no network, server busy, still at work on an earlier attempt). */
 export type Attempt<T> = { kind: 'answer'; value: T } | { kind: 'none' };

@@ -13,7 +13,7 @@ export interface TimeBase {
   timeZone: string | null;
 }
 
-export const clockText = (utcMs: number, uS: number | null, { timeZone }: TimeBase): string =>
+const clockText = (utcMs: number, uS: number | null, { timeZone }: TimeBase): string =>
   timeZone === null ? formatUtcHonest(utcMs, uS) : formatLocalHonest(utcMs, uS, timeZone);
 
 /** Planned to the second, actual with its uncertainty, and the difference, which is the thing to see. */

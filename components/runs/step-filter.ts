@@ -39,8 +39,3 @@ export function filterChoices(rows: readonly StepRowView[]): Record<keyof StepFi
     outcome: [...distinct(rows.map((row) => row.outcome ?? 'running')), ...(rows.some((row) => row.good === false) ? ['not good'] : [])],
   };
 }
-
-/** Actual minus planned, s; null where one of them is missing. */
-export const startDelayS = (row: StepRowView): number => (row.startUtcMs - row.plannedStartUtcMs) / 1000;
-export const endDelayS = (row: StepRowView): number | null =>
-  row.endUtcMs === null || row.plannedEndUtcMs === null ? null : (row.endUtcMs - row.plannedEndUtcMs) / 1000;

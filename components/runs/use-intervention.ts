@@ -71,7 +71,7 @@ export function useIntervention({ labId, runId }: RunAddress): { local: LocalInt
 }
 
 /** A resume counts for 5 s after the tap: whoever tapped must still be looking. */
-export const resumeExpiresMs = 5000;
+const resumeExpiresMs = 5000;
 
 /**
  * Resumes once. It is never sent again by itself and never waits for a connection.

@@ -1,5 +1,5 @@
 import { formatFixed, formatSignificant, NARROW_SPACE, withUnit } from './format-number';
-import { formatUncertain, type UncertainOptions, uncertainParts, type UncertainParts } from './format-uncertain';
+import { formatUncertain, type UncertainOptions } from './format-uncertain';
 
 /** A turntable angle: `20.18°`, `−175.00°`. */
 export function formatDegrees(deg: number | null, decimals = 2): string {
@@ -32,11 +32,6 @@ const scaledUncertain = (angle: { value: number; u: number | null }) => {
 /** A measured pendulum angle: `2.374(41) mrad`. */
 export function formatDeflectionUncertain(angle: { value: number; u: number | null }, options: UncertainOptions = {}): string {
   return formatUncertain(scaledUncertain(angle), options);
-}
-
-/** {@link formatDeflectionUncertain} in pieces. */
-export function deflectionUncertainParts(angle: { value: number; u: number | null }, options: UncertainOptions = {}): UncertainParts {
-  return uncertainParts(scaledUncertain(angle), options);
 }
 
 /** A reading of a channel in the channel's own unit, with digits to suit its size. */

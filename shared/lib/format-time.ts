@@ -1,4 +1,3 @@
-import { formatTimeUncertainty } from './format-duration';
 import { NARROW_SPACE } from './format-number';
 
 /**
@@ -96,12 +95,6 @@ export function zoneOffsetMs(utcMs: number, timeZone: string): number {
 /** {@link formatUtcHonest} in local time of the zone. */
 export function formatLocalHonest(utcMs: number, uS: number | null, timeZone: string): string {
   return Number.isFinite(utcMs) ? formatUtcHonest(utcMs + zoneOffsetMs(utcMs, timeZone), uS) : '–';
-}
-
-/** {@link formatUtcHonest} with its uncertainty: `05:32:40.218 63 ± 0.21 ms`. */
-export function formatUtcUncertain(utcMs: number, uS: number | null): string {
-  const time = formatUtcHonest(utcMs, uS);
-  return uS === null ? time : `${time} ${formatTimeUncertainty(uS)}`;
 }
 
 const two = (n: number) => String(n).padStart(2, '0');

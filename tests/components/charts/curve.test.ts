@@ -1,7 +1,7 @@
 import * as fc from 'fast-check';
 import { extent, gapOf, lowerBound, valueAt } from '@/components/charts/curve';
 import { panned, zoomed } from '@/components/charts/deflection-plot-types';
-import { niceTicks, timeTicks } from '@/components/charts/ticks';
+import { niceTicks } from '@/components/charts/ticks';
 
 test('the first index at or after a value is found', () => {
   fc.assert(
@@ -37,19 +37,6 @@ test('ticks are round, inside the span, and about as many as asked for', () => {
     }),
   );
   expect(niceTicks(6.6, 6.75, 3)).toEqual({ values: [6.6, 6.65, 6.7, 6.75].map((value) => expect.closeTo(value, 9)), decimals: 2 });
-});
-
-test('clock ticks fall on round local times in a zone of half an hour', () => {
-  const offsetMs = 5.5 * 3_600_000;
-  const ticks = timeTicks(Date.UTC(2031, 0, 1, 0, 10), Date.UTC(2031, 0, 1, 6, 0), { count: 6, offsetMs });
-  expect(ticks.map((at) => new Date(at + offsetMs).toISOString().slice(11, 16))).toEqual([
-    '06:00',
-    '07:00',
-    '08:00',
-    '09:00',
-    '10:00',
-    '11:00',
-  ]);
 });
 
 test('zooming keeps the point under the finger and stays within the data', () => {
