@@ -55,7 +55,7 @@ export function FitPlot({ curve, rangeMrad }: FitPlotProps) {
         <Svg width={width} height={heightPx} viewBox={`0 0 ${width} ${heightPx}`} aria-hidden>
           <Axes {...main} colors={colors} yUnit="mrad" showX={false} />
           <Curve {...main} points={{ x: minutes, data: dataMrad, model: modelMrad }} colors={colors} station={curve.station} />
-          <Axes {...rest} colors={colors} yUnit="data − fit, µrad" yTicks={2} xUnit="min" />
+          <Axes {...rest} colors={colors} yUnit="data − fit, µrad" yTicks={4} xUnit="min" />
           <Residuals {...rest} x={minutes} y={residualUrad} colors={colors} />
         </Svg>
       </View>
