@@ -25,7 +25,12 @@ const night = (hours: number): ProtocolDocument => ({
     {
       kind: 'repeat',
       times: Math.round((hours * beatsPerHour) / 2),
-      steps: [{ kind: 'swing', to: 'far' }, { kind: 'dwell', beat_periods: 2 }, { kind: 'swing', to: 'near' }, { kind: 'dwell', beat_periods: 2 }],
+      steps: [
+        { kind: 'swing', to: 'far' },
+        { kind: 'dwell', beat_periods: 2 },
+        { kind: 'swing', to: 'near' },
+        { kind: 'dwell', beat_periods: 2 },
+      ],
     },
   ],
 });
@@ -47,7 +52,8 @@ async function run(): Promise<void> {
     const { elapsedS, simulatedS } = await once(hours);
     points.push({ size: hours, cost: elapsedS });
     report({ name: `rehearsal ${hours} h`, value: elapsedS, unit: 's', goal: 10, want: 'at most', peer: null });
-    if (hours === 12) report({ name: 'rehearsal speed', value: simulatedS / elapsedS, unit: '× real time', goal: 4000, want: 'at least', peer: null });
+    if (hours === 12)
+      report({ name: 'rehearsal speed', value: simulatedS / elapsedS, unit: '× real time', goal: 4000, want: 'at least', peer: null });
   }
   report({ name: 'rehearsal growth', value: growth(points), unit: 'exponent', goal: 1.2, want: 'at most', peer: null });
   rmSync(folder, { recursive: true });

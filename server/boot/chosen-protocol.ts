@@ -38,7 +38,9 @@ export function chosenProtocol({ positionals, template, rig: rigFile, usage }: C
   const [file, ...others] = positionals;
   if (others.length > 0) throw new Unusable(`One protocol at a time: ${positionals.join(', ')} were given.\n${usage}`);
   if ((file === undefined) === (template === undefined)) {
-    throw new Unusable(`${file === undefined ? 'No protocol was given' : 'Both a file and a template were given'}; one of the two is needed.\n${usage}`);
+    throw new Unusable(
+      `${file === undefined ? 'No protocol was given' : 'Both a file and a template were given'}; one of the two is needed.\n${usage}`,
+    );
   }
   if (template !== undefined) return fromTemplate(template, rig);
   return { document: readProtocol(file as string), rig };
@@ -47,7 +49,10 @@ export function chosenProtocol({ positionals, template, rig: rigFile, usage }: C
 function fromTemplate(id: string, rig: RigDocument): Choice {
   const template = templateById(id);
   if (template !== undefined) return { document: template.make(rig), rig: template.rigFor(rig) };
-  if (templatesNotYet.includes(id)) throw new NotYetError(`The template "${id}" needs steps that are not built yet. Built are: ${templates.map((each) => each.id).join(', ')}.`);
+  if (templatesNotYet.includes(id))
+    throw new NotYetError(
+      `The template "${id}" needs steps that are not built yet. Built are: ${templates.map((each) => each.id).join(', ')}.`,
+    );
   throw new Unusable(`There is no template "${id}". There are: ${templates.map((each) => each.id).join(', ')}.`);
 }
 

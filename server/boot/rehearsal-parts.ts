@@ -20,4 +20,9 @@ function createSettle(): () => Promise<void> {
 }
 
 /** The parts of every rehearsal: the real link and codec on the light simulated controller. */
-export const rehearsalParts = (): RehearsalParts => ({ sha256: sha256Hex, settle: createSettle(), createLink, createController: createSimulatedController });
+export const rehearsalParts = (): RehearsalParts => ({
+  sha256: sha256Hex,
+  settle: createSettle(),
+  createLink,
+  createController: createSimulatedController,
+});

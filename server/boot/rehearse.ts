@@ -90,7 +90,9 @@ function faultOf(text: string): SimulatedRun['faults'][number] {
   const [, kind = '', seconds = ''] = /^([a-z-]+)@(\d+(?:\.\d+)?)$/.exec(text) ?? [];
   if (isFaultKind(kind)) return { kind, atS: Number(seconds) };
   if (faultKindsNotYet.includes(kind)) throw new NotYetError(`--fault ${kind} is not built yet. Built are: ${faultKinds.join(', ')}.`);
-  throw new Unusable(`--fault ${text}: KIND@SECONDS is needed, for example link-drop@600; the kinds are ${[...faultKinds, ...faultKindsNotYet].join(', ')}.`);
+  throw new Unusable(
+    `--fault ${text}: KIND@SECONDS is needed, for example link-drop@600; the kinds are ${[...faultKinds, ...faultKindsNotYet].join(', ')}.`,
+  );
 }
 
 function emptyFolder(folder: string | undefined): string {
@@ -104,7 +106,8 @@ function emptyFolder(folder: string | undefined): string {
 /** The simulated pendulum needs its torque and its free oscillation. */
 function assertSimulable(rig: RigDocument): void {
   geometryOf(rig);
-  if (oscillatorOf(rig) === null) throw new Unusable('The rig cannot be simulated: measured.period_s and measured.decayTime_s are needed in its document.');
+  if (oscillatorOf(rig) === null)
+    throw new Unusable('The rig cannot be simulated: measured.period_s and measured.decayTime_s are needed in its document.');
 }
 
 /** The rehearsal's id: the same for the same input. */

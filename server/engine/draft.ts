@@ -1,7 +1,19 @@
 import type { RunStart, StepOutcome, StepRow } from '@/shared/archive/run-records';
 import type { Instant } from '../interfaces/clock';
 import type { LinkCommand } from '../interfaces/turntable-link';
-import type { ActiveStep, Effect, Happening, KnownController, Motion, NoticeTopic, Reason, RunContext, RunEvent, RunEventOf, RunEventType } from './run-context';
+import type {
+  ActiveStep,
+  Effect,
+  Happening,
+  KnownController,
+  Motion,
+  NoticeTopic,
+  Reason,
+  RunContext,
+  RunEvent,
+  RunEventOf,
+  RunEventType,
+} from './run-context';
 
 /** What one transition gives out besides the new context. */
 export interface Output {

@@ -11,7 +11,8 @@ import { CONFIRM_MS, GAP_LIMIT_MS, LEAD_MS } from './timing';
 
 /** Events after which a run never goes on without a person, and what they mean for people. */
 const grave = {
-  'controller-reset': 'The controller restarted and has lost its position. Somebody has to be at the rig: home it and arm it again in a new run.',
+  'controller-reset':
+    'The controller restarted and has lost its position. Somebody has to be at the rig: home it and arm it again in a new run.',
   interlock: 'The interlock was opened. Close it and arm the rig again on site, then resume.',
   supply: 'The motor supply was lost, and with it the position. Somebody has to be at the rig: home it and arm it again in a new run.',
   limit: 'A motion met a travel limit. Somebody has to look at the rig before it moves again.',
@@ -78,7 +79,8 @@ export function noteInterruption(draft: Draft): void {
   const { event, context } = draft;
   const cause = causeOf(event);
   if (cause === null) return;
-  const sinceUtcMs = event.type === 'server-restarted' ? event.aliveUtcMs : event.type === 'database-away' ? event.sinceUtcMs : draft.stamp.utcMs;
+  const sinceUtcMs =
+    event.type === 'server-restarted' ? event.aliveUtcMs : event.type === 'database-away' ? event.sinceUtcMs : draft.stamp.utcMs;
   noteRestart(draft);
   if (event.type === 'database-away') draft.log('database-away', { gapS: (draft.nowUtcMs - sinceUtcMs) / 1000 });
   const before = context.interruption;
@@ -125,7 +127,8 @@ export function motionRefusal(draft: Draft, arm: ArmGiven, armVoid: string | nul
   if (!context.linkUp || known === null) return 'The link to the controller is down; wait until it is ready.';
   if (!known.interlockClosed) return 'The interlock is open; close it first.';
   if (!known.supplyPresent) return 'The motor supply is off; switch it on at the rig.';
-  if (!known.positionKnown && context.step?.row.kind !== 'home') return 'The controller does not know its position, so this run cannot go on. Stop it, and home the rig in a new run.';
+  if (!known.positionKnown && context.step?.row.kind !== 'home')
+    return 'The controller does not know its position, so this run cannot go on. Stop it, and home the rig in a new run.';
   return elsewhereRefusal(draft, known) ?? armRefusal(draft, arm, armVoid);
 }
 
@@ -138,7 +141,8 @@ function elsewhereRefusal(draft: Draft, known: KnownController): string | null {
 
 function armRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string | null {
   if (arm === 'simulated') return null;
-  if (arm === null || armVoid !== null) return `The rig is not armed${armVoid === null ? '' : `: ${armVoid}`}. A named person has to arm it on site first.`;
+  if (arm === null || armVoid !== null)
+    return `The rig is not armed${armVoid === null ? '' : `: ${armVoid}`}. A named person has to arm it on site first.`;
   const endUtcMs = predictEndUtcMs(draft.start, draft.context, { nowUtcMs: draft.nowUtcMs });
   if (arm.untilUtcMs > endUtcMs) return null;
   return `The arm of ${arm.name} ends at ${iso(arm.untilUtcMs)}, before the predicted finish at ${iso(endUtcMs)}. Arm the rig until after that.`;
@@ -150,7 +154,11 @@ const iso = (utcMs: number) => new Date(utcMs).toISOString();
 export function carryOn(draft: Draft): void {
   const { context } = draft;
   const { interruption, step } = context;
-  draft.log('resumed', { by: 'protocol', cause: interruption?.cause ?? null, gapS: (draft.nowUtcMs - (interruption?.sinceUtcMs ?? draft.nowUtcMs)) / 1000 });
+  draft.log('resumed', {
+    by: 'protocol',
+    cause: interruption?.cause ?? null,
+    gapS: (draft.nowUtcMs - (interruption?.sinceUtcMs ?? draft.nowUtcMs)) / 1000,
+  });
   context.interruption = null;
   context.reason = null;
   context.ahead = null;

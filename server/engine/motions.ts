@@ -65,7 +65,9 @@ export function askAgain(draft: Draft): void {
   const planned = draft.step.item.step;
   context.moveRetries += 1;
   motion.commandId =
-    planned.kind === 'swing' ? sendMove(draft, swingMove(planned, start.rig, context.moment.angleDeg), null) : draft.command((id) => ({ kind: 'home', id }));
+    planned.kind === 'swing'
+      ? sendMove(draft, swingMove(planned, start.rig, context.moment.angleDeg), null)
+      : draft.command((id) => ({ kind: 'home', id }));
 }
 
 function confirmResume(draft: Draft): void {

@@ -92,7 +92,8 @@ export function noteEdge(draft: Draft): void {
 export function noteStandstill(draft: Draft): void {
   const { link } = draft.told('link.standstill');
   const { angleDeg } = link;
-  if (draft.context.controller !== null) Object.assign(draft.context.controller, { moving: false, angleDeg, positionKnown: angleDeg !== null });
+  if (draft.context.controller !== null)
+    Object.assign(draft.context.controller, { moving: false, angleDeg, positionKnown: angleDeg !== null });
 }
 
 export function noteRefusal(draft: Draft): void {
@@ -106,6 +107,8 @@ export function noteStrangeMotion(draft: Draft): void {
   const { link } = draft.told('link.motion-began');
   const { commandId, angleDeg } = link;
   draft.log('unexpected-motion', { commandId, angleDeg });
-  draft.because('unexpected-motion', 'The turntable moved without a command of this run. Somebody has to look at the rig before it moves again.');
+  draft.because(
+    'unexpected-motion',
+    'The turntable moved without a command of this run. Somebody has to look at the rig before it moves again.',
+  );
 }
-

@@ -37,5 +37,9 @@ function afterPresentStep({ step, moment, swingStartUtcMs }: RunContext, nowUtcM
   const { row, motion, broken, plannedMs } = step;
   const lengthMs = plannedMs ?? (row.plannedEndUtcMs ?? row.startUtcMs) - row.plannedStartUtcMs;
   const endUtcMs = broken ? nowUtcMs + lengthMs : Math.max(row.startUtcMs + lengthMs, nowUtcMs);
-  return { utcMs: endUtcMs, angleDeg: motion?.targetDeg ?? moment.angleDeg, swingStartUtcMs: motion === null ? null : broken ? nowUtcMs : (swingStartUtcMs ?? row.startUtcMs) };
+  return {
+    utcMs: endUtcMs,
+    angleDeg: motion?.targetDeg ?? moment.angleDeg,
+    swingStartUtcMs: motion === null ? null : broken ? nowUtcMs : (swingStartUtcMs ?? row.startUtcMs),
+  };
 }

@@ -115,7 +115,11 @@ export class RigSupervisor {
     const stored = await store.load(labId, runId);
     if (stored === null) return;
     const endedAtUtcMs = clock.utcMs();
-    const event = appendEvent(stored.chain, { at: new Date(endedAtUtcMs).toISOString(), kind: 'failed', data: { code: 'given-up', by, reason: run.why } }, sha256);
+    const event = appendEvent(
+      stored.chain,
+      { at: new Date(endedAtUtcMs).toISOString(), kind: 'failed', data: { code: 'given-up', by, reason: run.why } },
+      sha256,
+    );
     const { snapshot, chartVersion } = stored;
     const summary = { state: 'failed', outcome: 'failed' as const, startedAtUtcMs: null, endedAtUtcMs, predictedEndUtcMs: null };
     await store.commit({ labId, runId, expectedSeq: stored.chain.seq, snapshot, chartVersion, steps: [], events: [event], summary });
@@ -148,7 +152,12 @@ export class RigSupervisor {
   private drive(start: RunStart, stored: StoredRun | null, link: TurntableLink): RunDriver {
     const { store, clock, sha256, armOf, perform, onError } = this.parts;
     const driver = new RunDriver({
-      start, stored, store, clock, sha256, link,
+      start,
+      stored,
+      store,
+      clock,
+      sha256,
+      link,
       armNow: () => armOf(start.rigId),
       perform: (effect) => perform(effect, start),
       onError: (error) => onError?.(error, start),
@@ -163,7 +172,8 @@ export class RigSupervisor {
 
   private assertFree(rigId: string): void {
     const active = this.byRig.get(rigId);
-    if (active !== undefined && !active.isOver()) throw new StartRefused('rig-busy', `The rig is taken by another run (${active.facts().state}). Wait for its end, or stop it.`);
+    if (active !== undefined && !active.isOver())
+      throw new StartRefused('rig-busy', `The rig is taken by another run (${active.facts().state}). Wait for its end, or stop it.`);
     const quarantined = this.quarantine.get(rigId);
     if (quarantined !== undefined) throw new StartRefused('rig-busy', `The rig is blocked by an unfinished run. ${quarantined.why}`);
   }
@@ -172,8 +182,10 @@ export class RigSupervisor {
     const link = this.parts.linkOf(rigId);
     const health = link?.health();
     const controller = link?.controller() ?? null;
-    if (link === null || health === undefined) throw new StartRefused('not-ready', 'The rig has no link to a controller. Set one up on the rig page.');
-    if (health.condition !== 'ready' || controller === null) throw new StartRefused('not-ready', `The link to the controller is not ready: ${health.detail || health.condition}.`);
+    if (link === null || health === undefined)
+      throw new StartRefused('not-ready', 'The rig has no link to a controller. Set one up on the rig page.');
+    if (health.condition !== 'ready' || controller === null)
+      throw new StartRefused('not-ready', `The link to the controller is not ready: ${health.detail || health.condition}.`);
     if (!controller.interlockClosed) throw new StartRefused('not-ready', 'The interlock is open. Close the door, then start.');
     if (!controller.supplyPresent) throw new StartRefused('not-ready', 'The motor supply is off. Switch it on at the rig, then start.');
     if (controller.moving) throw new StartRefused('not-ready', 'The turntable is moving. Wait until it stands still, then start.');
@@ -184,10 +196,14 @@ export class RigSupervisor {
     if (start.simulated !== null) return;
     const { arm } = start;
     const nowUtcMs = this.parts.clock.utcMs();
-    if (arm === null || arm.untilUtcMs <= nowUtcMs) throw new StartRefused('not-armed', 'The rig is not armed. A named person on site has to arm it first.');
+    if (arm === null || arm.untilUtcMs <= nowUtcMs)
+      throw new StartRefused('not-armed', 'The rig is not armed. A named person on site has to arm it first.');
     const { endUtcMs } = planTimeline(start, { utcMs: nowUtcMs, angleDeg: start.rig.motion?.homeDeg ?? 0 });
     if (arm.untilUtcMs > endUtcMs) return;
     const until = new Date(arm.untilUtcMs).toISOString();
-    throw new StartRefused('not-armed', `The arm of ${arm.name} ends at ${until}, before the predicted finish at ${new Date(endUtcMs).toISOString()}. Arm the rig until after that.`);
+    throw new StartRefused(
+      'not-armed',
+      `The arm of ${arm.name} ends at ${until}, before the predicted finish at ${new Date(endUtcMs).toISOString()}. Arm the rig until after that.`,
+    );
   }
 }

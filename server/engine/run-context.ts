@@ -11,7 +11,19 @@ import type { Instant } from '../interfaces/clock';
 /** Raised whenever the shape or meaning of the stored context changes; other versions are quarantined. */
 export const CHART_VERSION = 1;
 
-export type ChartState = 'starting' | 'choosing' | 'homing' | 'moving' | 'standing' | 'interrupted' | 'holding' | 'held' | 'stopping' | 'stopped' | 'finished' | 'failed';
+export type ChartState =
+  | 'starting'
+  | 'choosing'
+  | 'homing'
+  | 'moving'
+  | 'standing'
+  | 'interrupted'
+  | 'holding'
+  | 'held'
+  | 'stopping'
+  | 'stopped'
+  | 'finished'
+  | 'failed';
 
 export interface Arm {
   /** The person on site who answers for the rig. */

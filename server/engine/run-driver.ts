@@ -164,7 +164,9 @@ export class RunDriver {
       predictedEndUtcMs: this.predict(this.snapshot, nowUtcMs),
       dwellsPlanned: this.dwellsPlanned,
     });
-    return this.databaseAwaySinceUtcMs === null ? facts : { ...facts, reason: 'The database is away; motion has been brought to rest, and the log is kept here until it is back.' };
+    return this.databaseAwaySinceUtcMs === null
+      ? facts
+      : { ...facts, reason: 'The database is away; motion has been brought to rest, and the log is kept here until it is back.' };
   }
 
   /** Where the run stands, as last saved. */
@@ -260,7 +262,8 @@ export class RunDriver {
   private async take({ event, done }: Exclude<Item, string>): Promise<void> {
     const result = advanceSafely(this.parts.start, this.snapshot, event);
     const halted = event.type === 'hold' || event.type === 'stop';
-    if (result.snapshot.context !== this.snapshot.context || result.snapshot.state !== this.snapshot.state) await this.saveThenAct(result, halted);
+    if (result.snapshot.context !== this.snapshot.context || result.snapshot.state !== this.snapshot.state)
+      await this.saveThenAct(result, halted);
     else if (halted) this.halting -= 1;
     done?.(this.stale || this.closed ? null : result);
   }
@@ -288,7 +291,10 @@ export class RunDriver {
     });
   }
 
-  private async save(snapshot: RunSnapshot, { toPerform, ...changed }: { steps: StepRow[]; events: ChainedEvent[]; toPerform: OwnEffect[] }): Promise<boolean> {
+  private async save(
+    snapshot: RunSnapshot,
+    { toPerform, ...changed }: { steps: StepRow[]; events: ChainedEvent[]; toPerform: OwnEffect[] },
+  ): Promise<boolean> {
     const { start, clock } = this.parts;
     const stored: StoredSnapshot = { ...snapshot, aliveUtcMs: clock.utcMs(), toPerform };
     const summary = summaryOf(snapshot, this.predict(snapshot, clock.utcMs()));

@@ -48,7 +48,12 @@ export function runStateOf({ state, context }: RunSnapshot): RunState {
   return state === 'interrupted' && context.step?.motion === null ? 'running' : shown[state];
 }
 
-const outcomes: Partial<Record<ChartState, 'finished' | 'held' | 'stopped' | 'failed'>> = { finished: 'finished', held: 'held', stopped: 'stopped', failed: 'failed' };
+const outcomes: Partial<Record<ChartState, 'finished' | 'held' | 'stopped' | 'failed'>> = {
+  finished: 'finished',
+  held: 'held',
+  stopped: 'stopped',
+  failed: 'failed',
+};
 
 export function summaryOf(snapshot: RunSnapshot, predictedEndUtcMs: number | null): RunSummaryColumns {
   const { startedAtUtcMs, endedAtUtcMs } = snapshot.context;
@@ -93,7 +98,12 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lastSeq, predictedEndU
     intervention:
       intervention === null
         ? null
-        : { kind: intervention.kind, by: intervention.by, serverAtUtcMs: intervention.serverAtUtcMs, confirmedAtUtcMs: intervention.confirmedAtUtcMs },
+        : {
+            kind: intervention.kind,
+            by: intervention.by,
+            serverAtUtcMs: intervention.serverAtUtcMs,
+            confirmedAtUtcMs: intervention.confirmedAtUtcMs,
+          },
     mayResume: mayResume(start, snapshot, { utcMs: nowUtcMs, arm }),
     lastSeq,
   };

@@ -1,7 +1,17 @@
 import type { StepRow, StepRowKind } from '@/shared/archive/run-records';
 import { advanceCursor, type CursorMoment, type PlannedItem } from '@/shared/protocol/cursor';
 import type { Step, SwingStep } from '@/shared/protocol/document';
-import { dwellEndUtcMs, homeDurationS, homeSpeedDegS, motionOf, settleEndUtcMs, type SwingMove, swingMove, UnplayableStep, waitUntilLocalTime } from '@/shared/protocol/durations';
+import {
+  dwellEndUtcMs,
+  homeDurationS,
+  homeSpeedDegS,
+  motionOf,
+  settleEndUtcMs,
+  type SwingMove,
+  swingMove,
+  UnplayableStep,
+  waitUntilLocalTime,
+} from '@/shared/protocol/durations';
 import { pathObstacles } from '@/shared/protocol/motion-path';
 import { stationAt } from '@/shared/protocol/stations';
 import type { RigMotion } from '@/shared/rig/document';
@@ -82,7 +92,10 @@ export function chooseNext(draft: Draft): void {
 }
 
 /** The step after the cursor; null with the reason set where a protocol goes on for ever. */
-function nextItem(draft: Draft, { cursor, moment }: Pick<RunContext, 'cursor'> & { moment: CursorMoment }): ReturnType<typeof advanceCursor> | null {
+function nextItem(
+  draft: Draft,
+  { cursor, moment }: Pick<RunContext, 'cursor'> & { moment: CursorMoment },
+): ReturnType<typeof advanceCursor> | null {
   try {
     return advanceCursor(draft.start, cursor, moment);
   } catch (error) {
@@ -151,7 +164,15 @@ export function beginHome(draft: Draft, item: PlannedItem): void {
   const durationMs = 1000 * homeDurationS(start.rig, context.moment.angleDeg);
   const row = newRow(draft, { item, station: stationAt(start.rig, motionLimits.homeDeg), endUtcMs: context.moment.utcMs + durationMs });
   const commandId = draft.command((id) => ({ kind: 'home', id }));
-  const motion = { commandId, targetDeg: null, startUtcMs: null, durationMs: homeLimitMs(motionLimits), late: false, began: false, reached: false };
+  const motion = {
+    commandId,
+    targetDeg: null,
+    startUtcMs: null,
+    durationMs: homeLimitMs(motionLimits),
+    late: false,
+    began: false,
+    reached: false,
+  };
   draft.openStep({ item, row, plannedMs: null, motion, broken: false });
   context.swingStartUtcMs = null;
   context.deadlineUtcMs = draft.nowUtcMs + motion.durationMs + MOTION_GRACE_MS;
@@ -173,7 +194,10 @@ export interface SwingStart {
 export function beginSwing(draft: Draft, { item, late }: SwingStart): void {
   const { context } = draft;
   if (!draft.controller.positionKnown) {
-    draft.because('position-unknown', `Step ${item.path}: the position of the turntable is not known. Begin the protocol with a home step.`);
+    draft.because(
+      'position-unknown',
+      `Step ${item.path}: the position of the turntable is not known. Begin the protocol with a home step.`,
+    );
     context.next = 'failed';
     return;
   }

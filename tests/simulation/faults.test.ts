@@ -50,7 +50,12 @@ test('under resume a swing that the fault broke is finished first, its row says 
     const { steps } = await runThrough({ ...shortProtocol, onInterruption: 'resume' }, { faults: [{ kind, atS: 49.5 }] });
     const late = steps.findIndex(({ outcome }) => outcome === 'late');
     expect(steps[late - 1]).toMatchObject({ kind: 'swing', outcome: 'cut short', station: '' });
-    expect(steps[late]).toMatchObject({ kind: 'swing', path: steps[late - 1]?.path, station: 'far', angleStartDeg: steps[late - 1]?.angleEndDeg });
+    expect(steps[late]).toMatchObject({
+      kind: 'swing',
+      path: steps[late - 1]?.path,
+      station: 'far',
+      angleStartDeg: steps[late - 1]?.angleEndDeg,
+    });
     const dwell = steps[late + 1];
     expect(dwell).toMatchObject({ kind: 'dwell', outcome: 'done', startUtcMs: steps[late]?.endUtcMs });
     expect((dwell?.endUtcMs ?? 0) - (dwell?.startUtcMs ?? 0)).toBeCloseTo(40_000, 6);
@@ -72,7 +77,10 @@ test('any fault at any second, also two of them, comes to an end that the table 
   await fc.assert(
     fc.asyncProperty(
       fc.constantFrom(...policies),
-      fc.array(fc.record({ kind: fc.constantFrom(...faults), atS: fc.double({ min: 0, max: end, noNaN: true }) }), { minLength: 1, maxLength: 2 }),
+      fc.array(fc.record({ kind: fc.constantFrom(...faults), atS: fc.double({ min: 0, max: end, noNaN: true }) }), {
+        minLength: 1,
+        maxLength: 2,
+      }),
       async (onInterruption, raised) => {
         const result = await runThrough({ ...shortProtocol, onInterruption }, { faults: raised, rateHz: 0.1 });
         assertWholeLog(result);

@@ -22,7 +22,16 @@ async function makeNight(onInterruption: InterruptionPolicy) {
   link.open();
   await clock.advance(3000);
   const store = new RehearsalStore(start);
-  const driver = new RunDriver({ start, stored: null, store, link, clock, sha256: sha256Hex, armNow: () => null, perform: () => undefined });
+  const driver = new RunDriver({
+    start,
+    stored: null,
+    store,
+    link,
+    clock,
+    sha256: sha256Hex,
+    armNow: () => null,
+    perform: () => undefined,
+  });
   driver.start();
   const angleDeg = () => controller.trueAngleDegAt(clock.utcMs());
   return { clock, controller, link, store, driver, angleDeg, pass: (seconds: number) => clock.advance(1000 * seconds) };
@@ -72,7 +81,12 @@ test.each(moments)('stop at %s s: at rest within the ramp, and nothing moves aga
 type Tap = { kind: 'pass'; seconds: number } | { kind: 'hold' | 'resume' | 'hold-after-dwell' | 'drop' | 'garbage' };
 const tap: fc.Arbitrary<Tap> = fc.oneof(
   { weight: 3, arbitrary: fc.record({ kind: fc.constant('pass' as const), seconds: fc.double({ min: 0.001, max: 45, noNaN: true }) }) },
-  { weight: 3, arbitrary: fc.record({ kind: fc.constantFrom('hold' as const, 'resume' as const, 'hold-after-dwell' as const, 'drop' as const, 'garbage' as const) }) },
+  {
+    weight: 3,
+    arbitrary: fc.record({
+      kind: fc.constantFrom('hold' as const, 'resume' as const, 'hold-after-dwell' as const, 'drop' as const, 'garbage' as const),
+    }),
+  },
 );
 
 async function doTap(night: Night, what: Tap): Promise<void> {
@@ -87,22 +101,28 @@ async function doTap(night: Night, what: Tap): Promise<void> {
 
 test('taps and line faults in any order: held means standing still, the log is whole, and the run can be stopped', async () => {
   await fc.assert(
-    fc.asyncProperty(fc.constantFrom<InterruptionPolicy>('hold', 'resume', 'stop'), fc.array(tap, { minLength: 1, maxLength: 20 }), async (onInterruption, taps) => {
-      const night = await makeNight(onInterruption);
-      for (const what of taps) await doTap(night, what);
-      await night.pass(60);
-      if (night.driver.facts().state === 'held') await expectStandstill(night, 60);
-      night.driver.stop('Ben');
-      await night.pass(100);
-      expect(['stopped', 'finished', 'failed']).toContain(night.driver.facts().state);
-      await expectStandstill(night, 60);
-      const steps = night.store.steps();
-      expect(steps.map(({ seq }) => seq)).toEqual(steps.map((_, index) => index + 1));
-      expect(steps.filter(({ outcome, endUtcMs, startUtcMs: from }) => outcome === null || endUtcMs === null || endUtcMs < from)).toEqual([]);
-      expect(night.driver.facts().state).not.toBe('failed');
-      expect(verifyChain(night.store.events, sha256Hex)).toMatchObject({ valid: true });
-      await night.link.close();
-    }),
+    fc.asyncProperty(
+      fc.constantFrom<InterruptionPolicy>('hold', 'resume', 'stop'),
+      fc.array(tap, { minLength: 1, maxLength: 20 }),
+      async (onInterruption, taps) => {
+        const night = await makeNight(onInterruption);
+        for (const what of taps) await doTap(night, what);
+        await night.pass(60);
+        if (night.driver.facts().state === 'held') await expectStandstill(night, 60);
+        night.driver.stop('Ben');
+        await night.pass(100);
+        expect(['stopped', 'finished', 'failed']).toContain(night.driver.facts().state);
+        await expectStandstill(night, 60);
+        const steps = night.store.steps();
+        expect(steps.map(({ seq }) => seq)).toEqual(steps.map((_, index) => index + 1));
+        expect(steps.filter(({ outcome, endUtcMs, startUtcMs: from }) => outcome === null || endUtcMs === null || endUtcMs < from)).toEqual(
+          [],
+        );
+        expect(night.driver.facts().state).not.toBe('failed');
+        expect(verifyChain(night.store.events, sha256Hex)).toMatchObject({ valid: true });
+        await night.link.close();
+      },
+    ),
     { numRuns: 60 },
   );
 }, 60_000);

@@ -52,7 +52,11 @@ describe('the rehearsal of a short night', () => {
 
   test('leaves an archive that verifies, with the recipe in run.json and times from the simulated clock', () => {
     const run = JSON.parse(readFileSync(at('night/run.json'), 'utf8')) as Record<string, unknown>;
-    expect(run).toMatchObject({ outcome: 'finished', startedAt: '2000-01-01T00:00:00.000Z', simulated: { trueG: 6.6743e-11, seed: 1, rateHz: 10 } });
+    expect(run).toMatchObject({
+      outcome: 'finished',
+      startedAt: '2000-01-01T00:00:00.000Z',
+      simulated: { trueG: 6.6743e-11, seed: 1, rateHz: 10 },
+    });
     const datapackage = JSON.parse(readFileSync(at('night/datapackage.json'), 'utf8')) as { created: string };
     expect(datapackage.created).toMatch(/^2000-01-01T02:48:0/);
     expect(archive().chain).toMatchObject({ valid: true });
@@ -73,7 +77,9 @@ describe('the rehearsal of a short night', () => {
     const event = JSON.parse(lines[6] ?? '') as { seq: number; at: string };
     lines[6] = JSON.stringify({ ...event, at: event.at.replace('2000', '2001') });
     tampered.set('events.jsonl', new TextEncoder().encode(lines.join('\n')));
-    const datapackage = JSON.parse(readFileSync(at('night/datapackage.json'), 'utf8')) as { resources: { path: string; hash?: string; bytes?: number }[] };
+    const datapackage = JSON.parse(readFileSync(at('night/datapackage.json'), 'utf8')) as {
+      resources: { path: string; hash?: string; bytes?: number }[];
+    };
     for (const resource of datapackage.resources) {
       if (resource.path !== 'events.jsonl') continue;
       delete resource.hash;
@@ -86,7 +92,9 @@ describe('the rehearsal of a short night', () => {
   });
 
   test('dwells last to the beat: from swing to swing two periods, to the controller’s clock', () => {
-    const swings = archive().steps.filter(({ kind }) => kind === 'swing').slice(1);
+    const swings = archive()
+      .steps.filter(({ kind }) => kind === 'swing')
+      .slice(1);
     for (let i = 1; i < swings.length; i += 1) {
       const beatMs = (swings[i]?.startUtcMs ?? 0) - (swings[i - 1]?.startUtcMs ?? 0);
       // Two periods of 420 s; a step of the controller's clock is a microsecond, its uncertainty some hundredths of a millisecond.
@@ -111,7 +119,10 @@ test('the same seed gives the same archive byte for byte, another seed another o
 
 test('seed, rate, true G and start are taken, and told in run.json', async () => {
   await command(short(), '--out', at('own'), '--seed', '42', '--rate', '2', '--true-g', '7e-11', '--start', '2031-05-06T21:00:00Z');
-  expect(JSON.parse(readFileSync(at('own/run.json'), 'utf8'))).toMatchObject({ startedAt: '2031-05-06T21:00:00.000Z', simulated: { trueG: 7e-11, seed: 42, rateHz: 2 } });
+  expect(JSON.parse(readFileSync(at('own/run.json'), 'utf8'))).toMatchObject({
+    startedAt: '2031-05-06T21:00:00.000Z',
+    simulated: { trueG: 7e-11, seed: 42, rateHz: 2 },
+  });
   const [, first, second] = readFileSync(at('own/channels/deflection.csv'), 'utf8').split('\n');
   expect([first?.split(',')[0], second?.split(',')[0]]).toEqual(['2031-05-06T21:00:00.250000Z', '2031-05-06T21:00:00.750000Z']);
 });
@@ -129,12 +140,19 @@ test.each([
 });
 
 /** Each repeat once is enough to see that the steps go through. */
-const onePassEach = (steps: readonly Step[]): Step[] => steps.map((step) => (step.kind === 'repeat' ? { ...step, times: 1, steps: onePassEach(step.steps) } : step));
+const onePassEach = (steps: readonly Step[]): Step[] =>
+  steps.map((step) => (step.kind === 'repeat' ? { ...step, times: 1, steps: onePassEach(step.steps) } : step));
 
 test.each(templates)('the template $id goes through to its end', async ({ id, make, rigFor }) => {
   const protocol = make(demoRigWide);
   const { code, out } = await command(
-    file(`${id}.json`, { ...protocol, steps: onePassEach(protocol.steps) }), '--rig', file(`${id}-rig.json`, rigFor(demoRigWide)), '--out', at(id), '--rate', '0.1',
+    file(`${id}.json`, { ...protocol, steps: onePassEach(protocol.steps) }),
+    '--rig',
+    file(`${id}-rig.json`, rigFor(demoRigWide)),
+    '--out',
+    at(id),
+    '--rate',
+    '0.1',
   );
   expect(code).toBe(0);
   expect(answer(out)).toMatchObject({ outcome: 'finished', holds: 0 });
@@ -155,8 +173,16 @@ describe('unusable input ends with 2, a sentence, and no folder', () => {
     ['a template that is not built', ['--template', 'shaped'], 'not built yet'],
     ['a file that is not there', [at('nowhere.json')], 'cannot be read'],
     ['a file that is no JSON', [file('broken.json', '{"formatVersion": 1,')], 'Line 1'],
-    ['an unknown station', [file('atlantis.json', { formatVersion: 1, name: 'x', steps: [{ kind: 'home' }, { kind: 'swing', to: 'atlantis' }] })], 'atlantis'],
-    ['a step that is not built', [file('kick.json', { formatVersion: 1, name: 'x', steps: [{ kind: 'home' }, { kind: 'kick', amplitude_urad: 2000 }] })], 'not-yet'],
+    [
+      'an unknown station',
+      [file('atlantis.json', { formatVersion: 1, name: 'x', steps: [{ kind: 'home' }, { kind: 'swing', to: 'atlantis' }] })],
+      'atlantis',
+    ],
+    [
+      'a step that is not built',
+      [file('kick.json', { formatVersion: 1, name: 'x', steps: [{ kind: 'home' }, { kind: 'kick', amplitude_urad: 2000 }] })],
+      'not-yet',
+    ],
     ['a rig without motion', [short(), '--rig', file('motionless.json', { ...demoRigWide, motion: undefined })], 'motion'],
     ['a rig without a period', [short(), '--rig', file('untimed.json', { ...demoRigWide, measured: undefined })], 'measured.period_s'],
     ['a seed that is none', [short(), '--seed', '1.5'], '--seed 1.5'],

@@ -15,7 +15,16 @@ export const shortProtocol: ProtocolDocument = {
     { kind: 'home' },
     { kind: 'swing', to: 'near' },
     { kind: 'dwell', for_s: 40 },
-    { kind: 'repeat', times: 2, steps: [{ kind: 'swing', to: 'far' }, { kind: 'dwell', for_s: 40 }, { kind: 'swing', to: 'near' }, { kind: 'dwell', for_s: 40 }] },
+    {
+      kind: 'repeat',
+      times: 2,
+      steps: [
+        { kind: 'swing', to: 'far' },
+        { kind: 'dwell', for_s: 40 },
+        { kind: 'swing', to: 'near' },
+        { kind: 'dwell', for_s: 40 },
+      ],
+    },
   ],
 };
 

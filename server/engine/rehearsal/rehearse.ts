@@ -46,7 +46,11 @@ export async function rehearse({ start, startUtcMs }: RehearsalInput, parts: Reh
   const motion = motionOf(rig);
   const clock = new VirtualClock(startUtcMs - PREPARE_MS, parts.settle);
   const controller = parts.createController({ clock, rig: motion, seed: simulated.seed });
-  const server = new RehearsalServer(start, { ...parts, clock, newLink: (epoch) => parts.createLink({ factory: controller.factory, clock, rig: motion, epoch }) });
+  const server = new RehearsalServer(start, {
+    ...parts,
+    clock,
+    newLink: (epoch) => parts.createLink({ factory: controller.factory, clock, rig: motion, epoch }),
+  });
   await clock.advance(PREPARE_MS);
 
   const deflection = new DeflectionSeries();
@@ -154,6 +158,15 @@ class RehearsalServer {
 
   private newDriver(stored: Awaited<ReturnType<RehearsalStore['load']>>): RunDriver {
     const { clock, sha256 } = this.parts;
-    return new RunDriver({ start: this.start, stored, store: this.store, link: this.link, clock, sha256, armNow: () => null, perform: () => undefined });
+    return new RunDriver({
+      start: this.start,
+      stored,
+      store: this.store,
+      link: this.link,
+      clock,
+      sha256,
+      armNow: () => null,
+      perform: () => undefined,
+    });
   }
 }

@@ -9,7 +9,15 @@ import { runStart, shortProtocol, startUtcMs } from './rig-bench';
  */
 
 const controller: ControllerState = {
-  bootId: 'boot-1', firmware: 'fake', positionKnown: true, angleDeg: 0, moving: false, interlockClosed: true, supplyPresent: true, armKey: true, driversOn: true,
+  bootId: 'boot-1',
+  firmware: 'fake',
+  positionKnown: true,
+  angleDeg: 0,
+  moving: false,
+  interlockClosed: true,
+  supplyPresent: true,
+  armKey: true,
+  driversOn: true,
 };
 const at = (seconds: number) => ({ utcMs: startUtcMs + 1000 * seconds, uS: 0.0002 });
 const heard = (link: LinkEvent): RunEvent => ({ type: `link.${link.kind}`, at: link.at, link }) as RunEvent;
@@ -86,10 +94,37 @@ function reach(state: ChartState, policy: InterruptionPolicy): { snapshot: RunSn
   return { snapshot, now };
 }
 
-const states: ChartState[] = ['starting', 'homing', 'moving', 'standing', 'interrupted', 'holding', 'held', 'stopping', 'stopped', 'finished', 'failed'];
+const states: ChartState[] = [
+  'starting',
+  'homing',
+  'moving',
+  'standing',
+  'interrupted',
+  'holding',
+  'held',
+  'stopping',
+  'stopped',
+  'finished',
+  'failed',
+];
 const underWay = ['homing', 'moving', 'standing'] as const;
 
-type Name = 'hold' | 'stop' | 'hold-after-dwell' | 'resume' | 'lost' | 'reset' | 'interlock' | 'supply' | 'lease' | 'restart' | 'database' | 'ready' | 'standstill' | 'stranger' | 'foreign';
+type Name =
+  | 'hold'
+  | 'stop'
+  | 'hold-after-dwell'
+  | 'resume'
+  | 'lost'
+  | 'reset'
+  | 'interlock'
+  | 'supply'
+  | 'lease'
+  | 'restart'
+  | 'database'
+  | 'ready'
+  | 'standstill'
+  | 'stranger'
+  | 'foreign';
 
 function eventOf(name: Name, from: { snapshot: RunSnapshot; now: number }): RunEvent {
   const now = at(from.now + 1);
@@ -127,7 +162,11 @@ const expected: Partial<Record<Name, Partial<Record<ChartState, ReturnType<typeo
   lost: Object.fromEntries([...underWay, 'starting', 'interrupted'].map((state) => [state, interruption])),
   restart: Object.fromEntries([...underWay, 'starting', 'interrupted'].map((state) => [state, interruption])),
   database: Object.fromEntries([...underWay, 'starting', 'interrupted'].map((state) => [state, interruption])),
-  reset: { ...Object.fromEntries([...underWay, 'starting', 'interrupted'].map((state) => [state, grave])), holding: always('held'), stopping: always('stopped') },
+  reset: {
+    ...Object.fromEntries([...underWay, 'starting', 'interrupted'].map((state) => [state, grave])),
+    holding: always('held'),
+    stopping: always('stopped'),
+  },
   interlock: Object.fromEntries([...underWay, 'starting', 'interrupted'].map((state) => [state, grave])),
   supply: Object.fromEntries([...underWay, 'starting', 'interrupted'].map((state) => [state, grave])),
   lease: { homing: interruption, moving: interruption },
@@ -137,9 +176,29 @@ const expected: Partial<Record<Name, Partial<Record<ChartState, ReturnType<typeo
   foreign: { homing: always('holding'), moving: always('holding'), standing: always('holding') },
 };
 
-const names: Name[] = ['hold', 'stop', 'hold-after-dwell', 'resume', 'lost', 'reset', 'interlock', 'supply', 'lease', 'restart', 'database', 'ready', 'standstill', 'stranger', 'foreign'];
+const names: Name[] = [
+  'hold',
+  'stop',
+  'hold-after-dwell',
+  'resume',
+  'lost',
+  'reset',
+  'interlock',
+  'supply',
+  'lease',
+  'restart',
+  'database',
+  'ready',
+  'standstill',
+  'stranger',
+  'foreign',
+];
 const policies: InterruptionPolicy[] = ['hold', 'resume', 'stop'];
-const cells = policies.flatMap((policy) => states.filter((state) => state !== 'interrupted' || policy === 'resume').flatMap((state) => names.map((name) => ({ policy, state, name }))));
+const cells = policies.flatMap((policy) =>
+  states
+    .filter((state) => state !== 'interrupted' || policy === 'resume')
+    .flatMap((state) => names.map((name) => ({ policy, state, name }))),
+);
 
 describe('every event in every state', () => {
   test.each(cells)('$policy: $name while $state', ({ policy, state, name }) => {
@@ -164,7 +223,9 @@ test.each(states)('nothing is set in motion by any event once a run is %s', (sta
   for (const name of names) {
     const from = reach(state, 'hold');
     const { effects } = advance(startWith('hold'), from.snapshot, eventOf(name, from));
-    expect(effects.filter((effect) => effect.kind === 'link' && (effect.command.kind === 'move' || effect.command.kind === 'home'))).toEqual([]);
+    expect(
+      effects.filter((effect) => effect.kind === 'link' && (effect.command.kind === 'move' || effect.command.kind === 'home')),
+    ).toEqual([]);
   }
 });
 

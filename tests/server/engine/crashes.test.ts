@@ -90,7 +90,9 @@ test('the end of an arm that was saved and not yet told is told by the next proc
   expect(bench.performed.filter(({ kind }) => kind === 'void-arm')).toEqual([]);
   bench.store.fault = () => 'none';
   await bench.restart(5);
-  expect(bench.performed.filter(({ kind }) => kind === 'void-arm')).toEqual([expect.objectContaining({ reason: 'the interlock was opened' })]);
+  expect(bench.performed.filter(({ kind }) => kind === 'void-arm')).toEqual([
+    expect.objectContaining({ reason: 'the interlock was opened' }),
+  ]);
 });
 
 type Deed =
@@ -102,10 +104,25 @@ type Deed =
 
 const deed: fc.Arbitrary<Deed> = fc.oneof(
   { weight: 6, arbitrary: fc.record({ kind: fc.constant('pass' as const), seconds: fc.double({ min: 0.001, max: 40, noNaN: true }) }) },
-  { weight: 5, arbitrary: fc.record({ kind: fc.constantFrom('hold' as const, 'resume' as const, 'hold-after-dwell' as const, 'resume' as const) }) },
-  { weight: 1, arbitrary: fc.record({ kind: fc.constantFrom('stop' as const, 'open' as const, 'close' as const, 'reset' as const, 'refuse' as const) }) },
+  {
+    weight: 5,
+    arbitrary: fc.record({ kind: fc.constantFrom('hold' as const, 'resume' as const, 'hold-after-dwell' as const, 'resume' as const) }),
+  },
+  {
+    weight: 1,
+    arbitrary: fc.record({
+      kind: fc.constantFrom('stop' as const, 'open' as const, 'close' as const, 'reset' as const, 'refuse' as const),
+    }),
+  },
   { weight: 2, arbitrary: fc.record({ kind: fc.constant('drop' as const), ms: fc.integer({ min: 100, max: 40_000 }) }) },
-  { weight: 2, arbitrary: fc.record({ kind: fc.constant('crash' as const), afterS: fc.double({ min: 0.1, max: 20, noNaN: true }), inWrite: fc.boolean() }) },
+  {
+    weight: 2,
+    arbitrary: fc.record({
+      kind: fc.constant('crash' as const),
+      afterS: fc.double({ min: 0.1, max: 20, noNaN: true }),
+      inWrite: fc.boolean(),
+    }),
+  },
   { weight: 2, arbitrary: fc.record({ kind: fc.constant('database' as const), ms: fc.integer({ min: 100, max: 20_000 }) }) },
 );
 
@@ -156,19 +173,23 @@ async function doDeed(bench: Bench, what: Deed): Promise<void> {
 
 test('whatever happens in whatever order: no command moves twice, no row is missing, the chain holds, and what is at rest stays at rest', async () => {
   await fc.assert(
-    fc.asyncProperty(fc.constantFrom<InterruptionPolicy>('hold', 'resume', 'stop'), fc.array(deed, { minLength: 1, maxLength: 25 }), async (onInterruption, deeds) => {
-      const bench = makeBench(runStart({ ...shortProtocol, onInterruption }));
-      bench.driver.start();
-      for (const what of deeds) await doDeed(bench, what);
-      bench.store.fault = () => 'none';
-      await bench.pass(120);
-      assertSound(bench);
-      bench.driver.stop('Ben');
-      await bench.pass(200);
-      expect(bench.driver.isOver()).toBe(true);
-      assertSound(bench);
-      assertNothingMovesAtRest(bench);
-    }),
+    fc.asyncProperty(
+      fc.constantFrom<InterruptionPolicy>('hold', 'resume', 'stop'),
+      fc.array(deed, { minLength: 1, maxLength: 25 }),
+      async (onInterruption, deeds) => {
+        const bench = makeBench(runStart({ ...shortProtocol, onInterruption }));
+        bench.driver.start();
+        for (const what of deeds) await doDeed(bench, what);
+        bench.store.fault = () => 'none';
+        await bench.pass(120);
+        assertSound(bench);
+        bench.driver.stop('Ben');
+        await bench.pass(200);
+        expect(bench.driver.isOver()).toBe(true);
+        assertSound(bench);
+        assertNothingMovesAtRest(bench);
+      },
+    ),
     { numRuns: 400 },
   );
 }, 120_000);

@@ -1,5 +1,12 @@
 import type { Clock, Instant } from '@/server/interfaces/clock';
-import type { ControllerState, LinkCommand, LinkEvent, LinkHealth, MotionEndCause, TurntableLink } from '@/server/interfaces/turntable-link';
+import type {
+  ControllerState,
+  LinkCommand,
+  LinkEvent,
+  LinkHealth,
+  MotionEndCause,
+  TurntableLink,
+} from '@/server/interfaces/turntable-link';
 import { trapezoid } from '@/shared/physics/trapezoid';
 
 interface Going {
@@ -40,7 +47,16 @@ export class FakeLink implements TurntableLink {
   async close(): Promise<void> {}
 
   health(): LinkHealth {
-    return { condition: this.up ? 'ready' : 'lost', detail: '', lastReplyUtcMs: null, roundTripMs: 2, discardedLines: 0, reconnects: 0, clockOffsetMs: 0, clockUS: 0.0002 };
+    return {
+      condition: this.up ? 'ready' : 'lost',
+      detail: '',
+      lastReplyUtcMs: null,
+      roundTripMs: 2,
+      discardedLines: 0,
+      reconnects: 0,
+      clockOffsetMs: 0,
+      clockUS: 0.0002,
+    };
   }
 
   controller(): ControllerState {
@@ -168,10 +184,12 @@ export class FakeLink implements TurntableLink {
     const { refuseNext } = this;
     this.refuseNext = null;
     if (refuseNext !== null) return this.say({ kind: 'refused', at: this.at(), commandId: command.id, ...refuseNext });
-    if (this.going !== null || this.waiting !== null) return this.say({ kind: 'refused', at: this.at(), commandId: command.id, code: 'busy', message: 'an order is waiting or in motion' });
+    if (this.going !== null || this.waiting !== null)
+      return this.say({ kind: 'refused', at: this.at(), commandId: command.id, code: 'busy', message: 'an order is waiting or in motion' });
     this.say({ kind: 'accepted', at: this.at(), commandId: command.id });
     const delayMs = command.kind === 'move' && command.startUtcMs !== null ? command.startUtcMs - this.clock.utcMs() : 0;
-    if (delayMs < 0) return this.say({ kind: 'refused', at: this.at(), commandId: command.id, code: 'past', message: 'the time of beginning has passed' });
+    if (delayMs < 0)
+      return this.say({ kind: 'refused', at: this.at(), commandId: command.id, code: 'past', message: 'the time of beginning has passed' });
     this.waiting = {
       id: command.id,
       cancel: this.clock.after(delayMs, () => {

@@ -113,7 +113,17 @@ export function makeBench(start: RunStart = runStart()): Bench {
   const performed: Effect[] = [];
   const errors: unknown[] = [];
   const arm = { now: start.arm };
-  const parts = (stored: StoredRun | null): RunDriverParts => ({ start, stored, store, link, clock, sha256, armNow: () => arm.now, perform: (effect) => performed.push(effect), onError: (error) => errors.push(error) });
+  const parts = (stored: StoredRun | null): RunDriverParts => ({
+    start,
+    stored,
+    store,
+    link,
+    clock,
+    sha256,
+    armNow: () => arm.now,
+    perform: (effect) => performed.push(effect),
+    onError: (error) => errors.push(error),
+  });
   const bench: Bench = {
     clock,
     link,
@@ -144,3 +154,29 @@ export async function underWay(seconds: number, start: RunStart = runStart()): P
   await bench.pass(seconds);
   return bench;
 }
+
+/** Kind and outcome of each row. */
+export const brief = (bench: Bench) => bench.store.log().map(({ kind, outcome }) => `${kind} ${outcome}`);
+
+/** Commands of these kinds that went to the controller. */
+export const sent = (bench: Bench, ...kinds: string[]) => bench.link.commands.filter(({ kind }) => kinds.includes(kind));
+
+/** Three reversals there and back at a beat of two periods. */
+export const beats: ProtocolDocument = {
+  formatVersion: 1,
+  name: 'Beats',
+  steps: [
+    { kind: 'home' },
+    { kind: 'swing', to: 'near' },
+    {
+      kind: 'repeat',
+      times: 3,
+      steps: [
+        { kind: 'swing', to: 'far' },
+        { kind: 'dwell', beat_periods: 2 },
+        { kind: 'swing', to: 'near' },
+        { kind: 'dwell', beat_periods: 2 },
+      ],
+    },
+  ],
+};

@@ -36,7 +36,14 @@ function makeLab(): Lab {
   const performed: Effect[] = [];
   const arms = new Map<string, Arm>();
   const newSupervisor = () =>
-    new RigSupervisor({ store: runs, clock, sha256, linkOf: (rigId) => links.get(rigId) ?? null, armOf: (rigId) => arms.get(rigId) ?? null, perform: (effect) => performed.push(effect) });
+    new RigSupervisor({
+      store: runs,
+      clock,
+      sha256,
+      linkOf: (rigId) => links.get(rigId) ?? null,
+      armOf: (rigId) => arms.get(rigId) ?? null,
+      perform: (effect) => performed.push(effect),
+    });
   const make = (more: Partial<RunStart> = {}) => runs.add(runStart(shortProtocol, more));
   return { clock, links, runs, performed, arms, newSupervisor, make, north: links.get('north-bench') as FakeLink };
 }
@@ -56,7 +63,10 @@ test('one run to a rig: a second start is refused until the first is over, anoth
   const supervisor = lab.newSupervisor();
   supervisor.startRun(lab.make());
   await lab.clock.advance(10_000);
-  expect(refusal(() => supervisor.startRun(lab.make({ runId: 'run-2' })))).toMatchObject({ code: 'rig-busy', message: expect.stringContaining('another run') });
+  expect(refusal(() => supervisor.startRun(lab.make({ runId: 'run-2' })))).toMatchObject({
+    code: 'rig-busy',
+    message: expect.stringContaining('another run'),
+  });
   supervisor.startRun(lab.make({ runId: 'run-3', rigId: 'south-bench' }));
   expect(supervisor.driverOf('run-3')).toBe(supervisor.activeOf('south-bench'));
   await lab.clock.advance(300_000);
@@ -66,10 +76,30 @@ test('one run to a rig: a second start is refused until the first is over, anoth
 
 const refusedStarts: { when: string; more: Partial<RunStart>; code: string; words: string }[] = [
   { when: 'not armed', more: { arm: null }, code: 'not-armed', words: 'A named person on site has to arm it first' },
-  { when: 'armed too short', more: { arm: { name: 'Ada Quill', untilUtcMs: startUtcMs + 60_000 } }, code: 'not-armed', words: 'before the predicted finish' },
-  { when: 'with an arm that is over', more: { arm: { name: 'Ada Quill', untilUtcMs: startUtcMs - 1 } }, code: 'not-armed', words: 'not armed' },
-  { when: 'to an unknown station', more: { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'swing', to: 'nowhere' }] } }, code: 'protocol-refused', words: 'nowhere' },
-  { when: 'with a step that is not built', more: { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'kick', amplitude_urad: 2000 }] } }, code: 'not-yet', words: 'kick' },
+  {
+    when: 'armed too short',
+    more: { arm: { name: 'Ada Quill', untilUtcMs: startUtcMs + 60_000 } },
+    code: 'not-armed',
+    words: 'before the predicted finish',
+  },
+  {
+    when: 'with an arm that is over',
+    more: { arm: { name: 'Ada Quill', untilUtcMs: startUtcMs - 1 } },
+    code: 'not-armed',
+    words: 'not armed',
+  },
+  {
+    when: 'to an unknown station',
+    more: { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'swing', to: 'nowhere' }] } },
+    code: 'protocol-refused',
+    words: 'nowhere',
+  },
+  {
+    when: 'with a step that is not built',
+    more: { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'kick', amplitude_urad: 2000 }] } },
+    code: 'not-yet',
+    words: 'kick',
+  },
   { when: 'on a rig without a link', more: { rigId: 'west-bench' }, code: 'not-ready', words: 'no link' },
 ];
 
@@ -90,7 +120,10 @@ test.each([
 ] as const)('a start is refused while %s', (_, spoil, words) => {
   const lab = makeLab();
   spoil(lab.north);
-  expect(refusal(() => lab.newSupervisor().startRun(lab.make()))).toMatchObject({ code: 'not-ready', message: expect.stringContaining(words) });
+  expect(refusal(() => lab.newSupervisor().startRun(lab.make()))).toMatchObject({
+    code: 'not-ready',
+    message: expect.stringContaining(words),
+  });
 });
 
 test.each([
@@ -120,7 +153,12 @@ test.each([
 test('a run that was stored and never began is taken up by its protocol’s rule', async () => {
   const lab = makeLab();
   const start = lab.make();
-  (lab.runs.byId.get('run-1') as MemoryStore).stored = JSON.stringify({ start, snapshot: null, chartVersion: 1, chain: { seq: 0, hash: '0'.repeat(64) } });
+  (lab.runs.byId.get('run-1') as MemoryStore).stored = JSON.stringify({
+    start,
+    snapshot: null,
+    chartVersion: 1,
+    chain: { seq: 0, hash: '0'.repeat(64) },
+  });
   const supervisor = lab.newSupervisor();
   const { taken } = await supervisor.recover();
   await lab.clock.advance(2_000);
@@ -136,12 +174,20 @@ test('a run that was stored and never began is taken up by its protocol’s rule
 test('a run of another chart version is quarantined: nothing is sent, and its rig stays blocked with a sentence', async () => {
   const lab = makeLab();
   const start = lab.make();
-  (lab.runs.byId.get('run-1') as MemoryStore).stored = JSON.stringify({ start, snapshot: { version: 99 }, chartVersion: 99, chain: { seq: 0, hash: '0'.repeat(64) } });
+  (lab.runs.byId.get('run-1') as MemoryStore).stored = JSON.stringify({
+    start,
+    snapshot: { version: 99 },
+    chartVersion: 99,
+    chain: { seq: 0, hash: '0'.repeat(64) },
+  });
   const supervisor = lab.newSupervisor();
   const { taken, quarantined } = await supervisor.recover();
   expect(taken).toEqual([]);
   expect(quarantined).toMatchObject([{ start: { runId: 'run-1' }, why: expect.stringContaining('another version') }]);
-  expect(refusal(() => supervisor.startRun(lab.make({ runId: 'run-2' })))).toMatchObject({ code: 'rig-busy', message: expect.stringContaining('unfinished run') });
+  expect(refusal(() => supervisor.startRun(lab.make({ runId: 'run-2' })))).toMatchObject({
+    code: 'rig-busy',
+    message: expect.stringContaining('unfinished run'),
+  });
   await lab.clock.advance(60_000);
   expect(lab.north.commands).toEqual([]);
   await supervisor.giveUp('north-bench', 'Cleo');

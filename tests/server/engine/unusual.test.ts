@@ -3,7 +3,11 @@ import { type Bench, makeBench, runStart, shortProtocol, underWay } from './rig-
 
 /** What should not happen and must still end well: nothing moves, and a sentence says why. */
 
-const withSteps = (...steps: ProtocolDocument['steps']): ProtocolDocument => ({ formatVersion: 1, name: 'Unusual', steps: [{ kind: 'home' }, ...steps] });
+const withSteps = (...steps: ProtocolDocument['steps']): ProtocolDocument => ({
+  formatVersion: 1,
+  name: 'Unusual',
+  steps: [{ kind: 'home' }, ...steps],
+});
 
 async function expectFailed(bench: Bench, words: string): Promise<void> {
   await bench.pass(60);
@@ -17,7 +21,11 @@ async function expectFailed(bench: Bench, words: string): Promise<void> {
 test.each([
   ['a step kind of a later version', withSteps({ kind: 'kick', amplitude_urad: 2000 }), '2.kick: kick cannot be run by this version'],
   ['a station the rig does not have', withSteps({ kind: 'swing', to: 'atlantis' }), '2.swing: The rig has no station "atlantis"'],
-  ['a beat without a swing', withSteps({ kind: 'dwell', beat_periods: 2 }), '2.dwell: A dwell with beat_periods must directly follow a swing'],
+  [
+    'a beat without a swing',
+    withSteps({ kind: 'dwell', beat_periods: 2 }),
+    '2.dwell: A dwell with beat_periods must directly follow a swing',
+  ],
   ['more than 10,000 steps', withSteps({ kind: 'repeat', times: 10_001, steps: [{ kind: 'mark', label: 'tick' }] }), 'at most 10000 steps'],
 ])('a protocol with %s that was never checked fails at that step', async (_, protocol, words) => {
   const bench = makeBench(runStart(protocol));
@@ -93,7 +101,11 @@ test('two taps on resume at once start the motion once', async () => {
 });
 
 test('a motion that ends at a limit holds the run; under stop it is stopped', async () => {
-  for (const [onInterruption, state] of [['hold', 'held'], ['resume', 'held'], ['stop', 'stopped']] as const) {
+  for (const [onInterruption, state] of [
+    ['hold', 'held'],
+    ['resume', 'held'],
+    ['stop', 'stopped'],
+  ] as const) {
     const bench = await underWay(3, runStart({ ...shortProtocol, onInterruption }));
     bench.link.endAt('limit');
     await bench.pass(5);

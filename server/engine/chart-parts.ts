@@ -1,0 +1,233 @@
+import { setup } from 'xstate';
+import type { RunStart } from '@/shared/archive/run-records';
+import { Draft, type Output } from './draft';
+import {
+  awaitReturn,
+  beginHold,
+  beginStop,
+  type GraveCause,
+  noteGrave,
+  noteInterruption,
+  requestHold,
+  requestHoldAfterDwell,
+  requestStop,
+  returnRefusal,
+} from './halting';
+import {
+  hasRestarted,
+  noteArmKey,
+  noteEdge,
+  noteInterlock,
+  noteLease,
+  noteLost,
+  noteReady,
+  noteRefusal,
+  noteReset,
+  noteStandstill,
+  noteStranger,
+  noteStrangeMotion,
+  noteSupply,
+} from './observations';
+import { type RunContext, type RunEvent } from './run-context';
+import { finishMotion, noteBegan, noteEnded, takeAhead } from './motions';
+import { chooseNext, standingEndUtcMs } from './steps';
+
+/** What the run's chart is put together from: actions, guards and the transitions that several states share. */
+
+interface ChartContext {
+  start: RunStart;
+  run: RunContext;
+  out: Output;
+}
+
+export type Told = { context: ChartContext; event: RunEvent };
+type Writer = (draft: Draft) => void;
+
+export const chart = setup({
+  types: { context: {} as ChartContext, events: {} as RunEvent, input: {} as { start: RunStart; nowUtcMs: number } },
+});
+
+const draftOf = ({ context, event }: Told) => new Draft(context.start, event, { context: context.run, out: context.out });
+
+/** An action: the writers one after another on one working copy. */
+export const act = (...writers: Writer[]) =>
+  chart.assign((told) => {
+    const draft = draftOf(told);
+    for (const write of writers) write(draft);
+    return { run: draft.context, out: draft.out };
+  });
+
+/** A guard that asks `holds` of the context as the writers would leave it. */
+export const when =
+  (holds: (draft: Draft) => boolean, ...writers: Writer[]) =>
+  (told: Told) => {
+    const draft = draftOf(told);
+    for (const write of writers) write(draft);
+    return holds(draft);
+  };
+
+const policyIs =
+  (policy: 'resume' | 'stop') =>
+  ({ context }: Told) =>
+    (context.start.protocol.onInterruption ?? 'hold') === policy;
+
+/** Only a person may go on after this: held, or stopped where the protocol says so. */
+export const gravely = (...writers: Writer[]) => [
+  { guard: policyIs('stop'), target: 'stopping' as const, actions: act(...writers, beginStop) },
+  { target: 'holding' as const, actions: act(...writers, beginHold) },
+];
+
+/** What the protocol's `onInterruption` decides. */
+const interruptedBy = (...writers: Writer[]) => [
+  { guard: policyIs('stop'), target: 'stopping' as const, actions: act(...writers, noteInterruption, beginStop) },
+  { guard: policyIs('resume'), target: 'interrupted' as const, actions: act(...writers, noteInterruption, awaitReturn) },
+  { target: 'holding' as const, actions: act(...writers, noteInterruption, beginHold) },
+];
+
+export const guarded = <T extends object>(guard: (told: Told) => boolean, transitions: T[]) =>
+  transitions.map((entry) => ({
+    ...entry,
+    guard: 'guard' in entry ? (told: Told) => guard(told) && (entry.guard as (told: Told) => boolean)(told) : guard,
+  }));
+
+export const fails = (code: string, text: string) => ({
+  target: 'failed' as const,
+  actions: act((draft) => void draft.because(code, text)),
+});
+
+export const isMine = ({ context, event }: Told) =>
+  'link' in event && 'commandId' in event.link && event.link.commandId === context.run.step?.motion?.commandId;
+export const isAhead = ({ context, event }: Told) =>
+  'link' in event && 'commandId' in event.link && event.link.commandId === context.run.ahead?.commandId;
+export const isCancelled = ({ context }: Told) => context.run.ahead?.cancelled === true;
+export const bootedAnew = ({ context, event }: Told) =>
+  event.type === 'link.ready' && hasRestarted(context.run, event.link.controller.bootId);
+const isOpenOrAbsent = ({ event }: Told) =>
+  (event.type === 'link.interlock' && !event.link.closed) || (event.type === 'link.supply' && !event.link.present);
+const endedBy =
+  (...causes: string[]) =>
+  (told: Told) =>
+    isMine(told) && told.event.type === 'link.motion-ended' && causes.includes(told.event.link.cause);
+const refusedFor =
+  (isFor: (told: Told) => boolean, ...codes: string[]) =>
+  (told: Told) =>
+    isFor(told) && told.event.type === 'link.refused' && codes.includes(told.event.link.code);
+const graveOf = (cause: GraveCause) => (draft: Draft) => noteGrave(draft, cause);
+
+/** Refusals that are over a moment later; all others say that the command is wrong or the controller is not fit. */
+const passing = [
+  'past',
+  'far',
+  'warning',
+  'lease',
+  'session',
+  'stopped',
+  'busy',
+  'old',
+  'repeat',
+  'reused',
+  'not-renewed',
+  'no-session',
+  'overtaken',
+];
+const MOST_RETRIES = 3;
+
+const explainRefusal: Writer = (draft) => {
+  if (draft.event.type === 'link.refused')
+    draft.because('command-refused', `The controller refused the motion: ${draft.event.link.message}`);
+};
+export const explainHomeFailure: Writer = (draft) => {
+  if (draft.event.type === 'link.home-failed') draft.because('home-failed', `Homing gave up: ${draft.event.link.message}`);
+};
+export const explainController: Writer = (draft) =>
+  void draft.because('controller-refused', draft.told('link.refused-controller').link.why);
+const explainStranger: Writer = (draft) =>
+  void draft.because('stopped-at-rig', 'The motion was ended at the rig, not by this run. Find out why, then resume.');
+export const explainNoReturn: Writer = (draft) => {
+  const why = returnRefusal(draft);
+  if (why !== null) draft.because(draft.context.interruption?.cause ?? 'held', `${draft.context.reason?.text ?? ''} ${why}`.trim());
+};
+
+/** A refused motion: the interlock or supply is an incident, a passing refusal is tried again, any other fails the run. */
+export const refusals = (isFor: (told: Told) => boolean, again: Writer) => [
+  ...guarded(refusedFor(isFor, 'interlock'), gravely(noteRefusal, graveOf('interlock'))),
+  ...guarded(refusedFor(isFor, 'supply'), gravely(noteRefusal, graveOf('supply'))),
+  {
+    guard: (told: Told) => refusedFor(isFor, ...passing)(told) && told.context.run.moveRetries < MOST_RETRIES,
+    actions: act(noteRefusal, again),
+  },
+  { guard: isFor, target: 'failed' as const, actions: act(noteRefusal, explainRefusal) },
+  { actions: act(noteRefusal) },
+];
+
+/** What the controller tells in every state, and what is only written down. */
+export const heard = {
+  'link.arm-key': { actions: act(noteArmKey) },
+  'link.edge': { actions: act(noteEdge) },
+  'link.standstill': { actions: act(noteStandstill) },
+  'link.lease-lapsed': { actions: act(noteLease) },
+  'link.refused': { actions: act(noteRefusal) },
+};
+
+/** What ends or changes a run that is under way, whatever step it is in. */
+export const underWay = {
+  ...heard,
+  hold: { target: 'holding' as const, actions: act(requestHold) },
+  stop: { target: 'stopping' as const, actions: act(requestStop) },
+  'hold-after-dwell': { actions: act(requestHoldAfterDwell) },
+  resume: { actions: act((draft) => draft.log('resume-refused', { why: 'the run is not held' })) },
+  'link.lost': interruptedBy(noteLost),
+  'link.ready': [...guarded(bootedAnew, gravely(noteReset, noteReady)), { actions: act(noteReady) }],
+  'link.reset': gravely(noteReset),
+  'link.interlock': [...guarded(isOpenOrAbsent, gravely(noteInterlock)), { actions: act(noteInterlock) }],
+  'link.supply': [...guarded(isOpenOrAbsent, gravely(noteSupply)), { actions: act(noteSupply) }],
+  'link.refused-controller': interruptedBy(noteStranger),
+  'server-restarted': interruptedBy(),
+  'database-away': interruptedBy(),
+};
+
+/** How the motion of the present step may end. */
+export const motionEnds = [
+  { guard: endedBy('done'), target: 'choosing' as const, actions: act(noteEnded, finishMotion, chooseNext) },
+  ...guarded(endedBy('lease'), interruptedBy(noteEnded)),
+  ...guarded(endedBy('limit'), gravely(noteEnded, graveOf('limit'))),
+  ...guarded(endedBy('interlock'), gravely(noteEnded, graveOf('interlock'))),
+  ...guarded(endedBy('supply'), gravely(noteEnded, graveOf('supply'))),
+  ...guarded(endedBy('reset'), gravely(noteEnded, graveOf('controller-reset'))),
+  { guard: isMine, target: 'holding' as const, actions: act(noteEnded, explainStranger, beginHold) },
+];
+
+export const strangeMotion = {
+  guard: (told: Told) => !isMine(told) && !isAhead(told),
+  target: 'holding' as const,
+  actions: act(noteStrangeMotion, beginHold),
+};
+
+/** While a hold or stop is being carried out: what still comes in completes the open row. */
+export const comingToRest = {
+  ...heard,
+  'link.motion-began': [
+    { guard: isAhead, actions: act(takeAhead) },
+    { guard: isMine, actions: act(noteBegan) },
+  ],
+  'link.motion-ended': [{ guard: isMine, actions: act(noteEnded) }],
+  'link.homed': [{ guard: isMine, actions: act(noteEnded) }],
+  'link.lost': { actions: act(noteLost) },
+  'link.refused-controller': { actions: act(noteStranger) },
+  'link.interlock': { actions: act(noteInterlock) },
+  'link.supply': { actions: act(noteSupply) },
+};
+
+export function isOver({ context, event }: Told): boolean {
+  const { step, ahead } = context.run;
+  return step !== null && (ahead === null || ahead.cancelled) && event.at.utcMs >= standingEndUtcMs(step);
+}
+
+export function isOverdue({ context, event }: Told): boolean {
+  const { ahead, deadlineUtcMs } = context.run;
+  return ahead !== null && !ahead.cancelled && deadlineUtcMs !== null && event.at.utcMs >= deadlineUtcMs;
+}
+
+export function pick<T extends object, K extends keyof T>(from: T, ...keys: K[]): Pick<T, K> {
+  return Object.fromEntries(keys.map((key) => [key, from[key]])) as Pick<T, K>;
+}
