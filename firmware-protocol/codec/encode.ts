@@ -1,14 +1,5 @@
 import { crc16, hex4 } from './crc';
-import {
-  NO_SESSION,
-  type EventMessage,
-  type Happening,
-  type Message,
-  type Order,
-  type Reply,
-  type ReplyBody,
-  type Request,
-} from './messages';
+import type { EventMessage, Happening, Message, Order, Reply, ReplyBody, Request } from './messages';
 
 /** The line of a message, check word and line feed included (SPEC 1.2). Values must lie in the ranges of SPEC 2. */
 export function encode(message: Message): string {
@@ -17,12 +8,12 @@ export function encode(message: Message): string {
 }
 
 /** Adds the check word and the line feed to a body. */
-export function seal(body: string): string {
+function seal(body: string): string {
   return `${body} ${hex4(crc16(body))}\n`;
 }
 
 /** A controller time as a stamp of 16 bytes (SPEC 2.3). */
-export function stamp(us: number): string {
+function stamp(us: number): string {
   const seconds = Math.floor(us / 1_000_000);
   const rest = us - seconds * 1_000_000;
   return `${String(1_000_000_000 + seconds).slice(1)}.${String(1_000_000 + rest).slice(1)}`;
@@ -98,9 +89,4 @@ function happeningText(what: Happening): string {
     case 'other':
       return what.name;
   }
-}
-
-/** The request that asks who is there; it needs neither session nor epoch and changes nothing. */
-export function identRequest(number: number): Request {
-  return { kind: 'request', epoch: 0, session: NO_SESSION, number, order: { word: 'ident' } };
 }

@@ -55,7 +55,7 @@ export function rateField(text: string | undefined): number | undefined {
 }
 
 /** Exactly `length` hexadecimal digits in upper case, as they stand. */
-export function hexField(text: string | undefined, length: number): string | undefined {
+function hexField(text: string | undefined, length: number): string | undefined {
   if (text === undefined || text.length !== length) return undefined;
   for (let index = 0; index < length; index += 1) {
     const code = text.charCodeAt(index);

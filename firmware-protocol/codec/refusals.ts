@@ -1,5 +1,5 @@
 /** SPEC 12: every refusal has a code for programs and a sentence for people. */
-export const REFUSALS = {
+const REFUSALS = {
   word: 'the controller does not know this order',
   field: 'a field of the order is missing, superfluous or out of range',
   epoch: 'another driver has taken the rig',

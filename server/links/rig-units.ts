@@ -1,10 +1,8 @@
 import type { LimitsBody } from '@/firmware-protocol/codec';
+import { homeSpeedDegS } from '@/shared/protocol/durations';
 import type { RigMotion } from '@/shared/rig/document';
 
 /** Between the rig's degrees and the controller's microsteps (SPEC 2.4). Position 0 is the home edge, at `homeDeg`. */
-
-/** Default of `motion.homeSpeed_deg_s`: a tenth of the greatest speed. */
-const HOME_SPEED_SHARE = 0.1;
 
 export function stepsOfDeg(rig: RigMotion, angleDeg: number): number {
   return Math.round((angleDeg - rig.homeDeg) * rig.stepsPerDegree) + 0;
@@ -17,10 +15,6 @@ export function degOfSteps(rig: RigMotion, steps: number): number {
 /** Thousandths of a microstep per s (or s²), rounded down: never above what was asked. */
 export function milliStepsOf(rig: RigMotion, degrees: number): number {
   return Math.max(1, Math.floor(degrees * rig.stepsPerDegree * 1000 * (1 + 1e-12)));
-}
-
-export function homeSpeedDegS(rig: RigMotion): number {
-  return rig.homeSpeed_deg_s ?? rig.maxSpeed_deg_s * HOME_SPEED_SHARE;
 }
 
 /** The soft limits and caps that a controller on this rig has after commissioning. */

@@ -15,7 +15,7 @@ export interface SerialSettings {
 }
 
 /** A serial port that cannot be opened; the message says what was tried, what is wrong and what would be right. */
-export class LineError extends Error {
+class LineError extends Error {
   constructor(
     readonly code: 'missing' | 'not-a-port' | 'locked' | 'no-permission' | 'failed',
     message: string,

@@ -188,6 +188,27 @@ describe('motions', () => {
 });
 
 describe('a broken line', () => {
+  test('at rest it is lost after 5 s without a valid reply, and closed, so that a hung port is let go', async () => {
+    const { clock, controller, told, link } = await ready();
+    const silentFromMs = clock.monotonicMs();
+    controller.dropLine(9_000);
+    await clock.advance(20_000, () => told.some(({ kind }) => kind === 'lost'));
+    expect(clock.monotonicMs() - silentFromMs).toBeGreaterThan(4_400);
+    expect(clock.monotonicMs() - silentFromMs).toBeLessThan(5_600);
+    expect(last(told, 'lost')?.why).toBe('No valid reply from the simulated turntable for 5 s.');
+    await clock.advance(12_000);
+    expect(link.health().condition).toBe('ready');
+    expect(last(told, 'ready')).toMatchObject({ sameBoot: true });
+  });
+
+  test('bytes that come late, all at once, are no loss', async () => {
+    const { clock, controller, kinds, link } = await ready();
+    controller.freeze(3_000);
+    await clock.advance(10_000);
+    expect(kinds()).toEqual(['ready']);
+    expect(link.health()).toMatchObject({ condition: 'ready', reconnects: 0, discardedLines: 0 });
+  });
+
   test('a stop that is asked for while it is broken goes out first of all when it is whole, and is confirmed', async () => {
     const { clock, link, controller, told, orders } = await ready();
     controller.unplug();
