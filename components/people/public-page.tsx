@@ -16,7 +16,7 @@ export function PublicPage({ title, intro, children }: PublicPageProps) {
     <ScrollView
       role="main"
       className="flex-1 bg-ink"
-      contentContainerClassName="min-h-full items-center justify-center px-4 py-10"
+      contentContainerClassName="items-center px-4 pb-10 pt-[12vh]"
       keyboardShouldPersistTaps="handled"
     >
       <View className="w-full max-w-[400px] gap-6">

@@ -2,7 +2,7 @@ import { useQuery } from '@tanstack/react-query';
 import { Link, Redirect, useLocalSearchParams, type Href } from 'expo-router';
 import { View } from 'react-native';
 import { call, useConnection, useSession } from '@/components/api';
-import { Body, Loading, Offline } from '@/components/ui';
+import { Body, Offline } from '@/components/ui';
 import { getHealth } from '@/shared/contracts/service';
 import { CredentialsForm } from './credentials-form';
 import { PublicPage } from './public-page';
@@ -21,19 +21,15 @@ export function SignInScreen() {
     <>
       {online ? null : <Offline />}
       <PublicPage title="Sign in" intro="Plan, run and prove a measurement of gravity with a torsion balance.">
-        {state.kind === 'unknown' ? (
-          <Loading label="Asking the server who you are" />
-        ) : (
-          <View className="gap-4">
-            <CredentialsForm onSignedIn={signedIn} />
-            <TextLink href="/forgotten-password" label="Forgotten password" />
-            {health.data?.data.demo === true ? (
-              <Body size={13} tone="dim">
-                This is the demo lab. Its sign-ins were printed where the server was started.
-              </Body>
-            ) : null}
-          </View>
-        )}
+        <View className="gap-4">
+          <CredentialsForm onSignedIn={signedIn} />
+          <TextLink href="/forgotten-password" label="Forgotten password" />
+          {health.data?.data.demo === true ? (
+            <Body size={13} tone="dim">
+              This is the demo lab. Its sign-ins were printed where the server was started.
+            </Body>
+          ) : null}
+        </View>
       </PublicPage>
     </>
   );

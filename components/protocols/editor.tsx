@@ -56,6 +56,7 @@ export function Editor({ protocol, etag }: EditorProps) {
         testID="editor"
         trailing={<EditorTrailing protocol={protocol} status={sync.state.status} onOpen={setSheet} />}
         asideOnlyWide
+        footerGivesWay
         aside={<EditorAside {...details} />}
         footer={<EditorFooter protocol={protocol} status={sync.state.status} onOpen={setSheet} />}
       >

@@ -49,7 +49,7 @@ function RevisionPanel({ revision, before, name }: { revision: Revision; before:
           </Label>
         </View>
         <View className="flex-row flex-wrap gap-2">
-          {before === null ? null : (
+          {changes.length === 0 ? null : (
             <Button
               expanded={open}
               icon="compare"
@@ -66,6 +66,7 @@ function RevisionPanel({ revision, before, name }: { revision: Revision; before:
             }
           />
         </View>
+        {before !== null && changes.length === 0 ? <Label>No quantity differs from revision {before.number}.</Label> : null}
         {open ? <ChangeList changes={changes} /> : null}
       </Panel>
     </Section>

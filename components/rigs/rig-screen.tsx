@@ -46,6 +46,7 @@ export function RigScreen() {
         </Chip>
       }
       footer={<StartButton rig={rig} />}
+      footerGivesWay
       aside={
         <>
           <RigDocumentSection rig={rig} etag={query.data?.etag ?? undefined} />

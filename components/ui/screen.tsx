@@ -3,7 +3,7 @@ import { Link, type Href } from 'expo-router';
 import { ScrollView, View } from 'react-native';
 import { Icon } from './icon';
 import { Heading } from './text';
-import { useWide } from './use-wide';
+import { useLow, useWide } from './use-wide';
 
 interface ScreenProps {
   title: string;
@@ -14,6 +14,8 @@ interface ScreenProps {
   children?: ReactNode;
   /** Stays at the bottom within the thumb's reach: the acts of the screen. */
   footer?: ReactNode;
+  /** On a very low page the acts follow the content instead of covering it. Never for stop and hold. */
+  footerGivesWay?: boolean;
   /** The right pane from 1024 px; below that it follows the content, unless `asideOnlyWide`. */
   aside?: ReactNode;
   asideOnlyWide?: boolean;
@@ -23,9 +25,20 @@ interface ScreenProps {
 const gutter = 'w-full max-w-[960px] px-4 wide:px-7';
 
 /** The frame of every screen: one heading of level 1, scrolled content, acts at the bottom, a right pane when wide. */
-export function Screen({ title, back, trailing, children, footer, aside, asideOnlyWide = false, testID }: ScreenProps) {
+export function Screen({
+  title,
+  back,
+  trailing,
+  children,
+  footer,
+  footerGivesWay = false,
+  aside,
+  asideOnlyWide = false,
+  testID,
+}: ScreenProps) {
   const wide = useWide();
   const beside = wide && aside !== undefined;
+  const inFlow = useLow() && footerGivesWay;
   return (
     <View className="min-h-0 flex-1 flex-row" testID={testID}>
       <View role="main" className="min-w-0 flex-1">
@@ -34,9 +47,10 @@ export function Screen({ title, back, trailing, children, footer, aside, asideOn
             <TitleBar title={title} back={back} trailing={trailing} />
             {children}
             {beside || asideOnlyWide ? null : aside}
+            {inFlow ? footer : null}
           </View>
         </ScrollView>
-        {footer === undefined ? null : (
+        {footer === undefined || inFlow ? null : (
           <View className="border-t border-line bg-ink">
             <View className={`${gutter} py-2`}>{footer}</View>
           </View>
@@ -63,7 +77,7 @@ function TitleBar({ title, back, trailing }: Pick<ScreenProps, 'title' | 'back' 
         <Link
           href={back.href}
           aria-label={`Back to ${back.label}`}
-          className="-ml-3 h-12 w-12 items-center justify-center rounded-action hover:bg-panel2"
+          className="-ml-3 h-12 w-12 flex-none items-center justify-center rounded-action hover:bg-panel2"
           style={{ display: 'flex' }}
         >
           <Icon name="back" />

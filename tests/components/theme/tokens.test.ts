@@ -40,7 +40,7 @@ describe.each(names)('the theme %s', (name) => {
 
   test('shows its ground before the application has loaded', () => {
     expect(script).toContain(`${name}: '${colors.ink}'`);
-    expect(ground).toContain(colors.ink);
+    for (const token of ['ink', 'text', 'dim', 'line', 'lamp', 'near'] as const) expect(ground).toContain(`: ${colors[token]};`);
   });
 
   test.each(['text', 'dim', 'lamp', 'near', 'far', 'danger', 'good'] as const)('has 4.5:1 for words in %s on every ground', (token) => {
