@@ -121,7 +121,7 @@ export function returnRefusal(draft: Draft): string | null {
 type ArmGiven = { name: string; untilUtcMs: number } | 'simulated' | null;
 
 /** What stands between a run at rest and its next motion, in a sentence; null where nothing does. */
-export function motionRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string | null {
+function motionRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string | null {
   const { context } = draft;
   const known = context.controller;
   if (!context.linkUp || known === null) return 'The link to the controller is down; wait until it is ready.';
@@ -218,7 +218,7 @@ export function takeAheadUnseen(draft: Draft): void {
 }
 
 /** The turntable stands still: the open row is closed with what is known of its end. */
-export function closeForRest(draft: Draft): void {
+function closeForRest(draft: Draft): void {
   const { context } = draft;
   takeAheadUnseen(draft);
   const { step } = context;

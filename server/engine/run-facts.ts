@@ -44,7 +44,7 @@ const shown: Record<ChartState, RunState> = {
 };
 
 /** An interrupted dwell goes on: nothing moves, and the run waits for the line only when its next motion is due. */
-export function runStateOf({ state, context }: RunSnapshot): RunState {
+function runStateOf({ state, context }: RunSnapshot): RunState {
   return state === 'interrupted' && context.step?.motion === null ? 'running' : shown[state];
 }
 

@@ -132,7 +132,7 @@ export function writeMark(draft: Draft, item: PlannedItem): void {
 }
 
 /** Begins a step at the present moment; one that this rig cannot carry out fails the run with a sentence. */
-export function beginItem(draft: Draft, item: PlannedItem): void {
+function beginItem(draft: Draft, item: PlannedItem): void {
   try {
     beginKind(draft, item);
   } catch (error) {
