@@ -60,6 +60,12 @@ export function brakeStretches({ position, speed }: Place, acceleration: number,
   const to = sign * Math.ceil(sign * position + needed - TINY_STEPS);
   const distance = Math.abs(to - position);
   if (distance < TINY_STEPS) return [];
+  // Barely moving: the last microstep is made at the mean pace of a ramp's first, not by an ever gentler approach.
+  const leastSpeed = Math.sqrt(2 * acceleration);
+  if (Math.abs(speed) < leastSpeed) {
+    const pace = leastSpeed / 2;
+    return [{ fromUs: startUs, toUs: startUs + (distance / pace) * US, from: position, to, speed: sign * pace, acceleration: 0 }];
+  }
   const durationUs = ((2 * distance) / Math.abs(speed)) * US;
   return [
     { fromUs: startUs, toUs: startUs + durationUs, from: position, to, speed, acceleration: (-sign * speed * speed) / (2 * distance) },

@@ -70,6 +70,21 @@ test('braking from anywhere in a motion ends on a whole microstep before the tar
   );
 });
 
+test('braking never takes longer than the ramp from full speed and one slow microstep', () => {
+  fc.assert(
+    fc.property(motion, fc.double({ min: 1e-6, max: 0.999999, noNaN: true }), ({ from, to, speed, acceleration }, share) => {
+      fc.pre(from !== to);
+      const stretches = rampStretches({ from, to, speed, acceleration, startUs: 0 });
+      const track = new Track(from);
+      track.add(stretches);
+      const us = (stretches.at(-1)?.toUs as number) * share;
+      const endUs = brakeStretches(track.at(us), acceleration, us).at(-1)?.toUs ?? us;
+      expect((endUs - us) / 1e6).toBeLessThanOrEqual(speed / acceleration + 2 * Math.sqrt(2 / acceleration));
+    }),
+    { seed: 13, numRuns: 500 },
+  );
+});
+
 test('tells when a place is passed', () => {
   const stretches = rampStretches({ from: -100, to: 100, speed: 50, acceleration: 25, startUs: 0 });
   // 200 steps at 50/s and 25/s²: 2 s up, 2 s cruise, 2 s down; the middle after 3 s.
