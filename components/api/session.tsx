@@ -1,5 +1,5 @@
 import { useQueryClient } from '@tanstack/react-query';
-import { createContext, useContext, useEffect, useMemo, useReducer, type ReactNode } from 'react';
+import { createContext, useContext, useEffect, useMemo, useReducer, useRef, type ReactNode } from 'react';
 import { getMe, signOut as signOutRoute, type Me, type MembershipView } from '@/shared/contracts/people';
 import { may, type Act } from '@/shared/contracts/roles';
 import { call, onSignInRefused } from './client';
@@ -29,6 +29,8 @@ interface SessionApi {
   membership: MembershipView | null;
   signedIn: (me: Me) => void;
   signOut: () => Promise<void>;
+  /** Reads again who is signed in: names, roles and time zones may have changed. */
+  refresh: () => Promise<void>;
   chooseLab: (labId: string) => void;
 }
 
@@ -90,6 +92,11 @@ export function SessionProvider({ children }: { children: ReactNode }) {
         dispatch({ kind: 'signed-out' });
         queries.clear();
       },
+      refresh: async () => {
+        const labId = state.kind === 'signed-in' ? state.labId : null;
+        const asked = await call(getMe).catch(() => null);
+        if (asked !== null) dispatch({ kind: 'asked', me: asked.data, rememberedLabId: labId ?? rememberedLabId() });
+      },
       chooseLab: (labId) => {
         rememberLabId(labId);
         dispatch({ kind: 'lab-chosen', labId });
@@ -97,7 +104,23 @@ export function SessionProvider({ children }: { children: ReactNode }) {
     }),
     [state, queries],
   );
+  useRefreshWhenSeen(api);
   return <SessionContext.Provider value={api}>{children}</SessionContext.Provider>;
+}
+
+/** A page that comes back into view after a while may show a role or a zone of yesterday. */
+function useRefreshWhenSeen({ state, refresh }: SessionApi) {
+  const signedIn = state.kind === 'signed-in';
+  const latest = useRef(refresh);
+  useEffect(() => {
+    latest.current = refresh;
+  });
+  useEffect(() => {
+    if (!signedIn) return undefined;
+    const onSeen = () => (document.visibilityState === 'visible' ? void latest.current() : undefined);
+    document.addEventListener('visibilitychange', onSeen);
+    return () => document.removeEventListener('visibilitychange', onSeen);
+  }, [signedIn]);
 }
 
 /** The lab in which this page works. Only below the signed-in part of the application. */

@@ -1,7 +1,7 @@
 import { useQueryClient } from '@tanstack/react-query';
 import { useState } from 'react';
 import { View } from 'react-native';
-import { labKey, useLab, useLabMutation, useLabQuery, useMay, wordsOf } from '@/components/api';
+import { labKey, useLab, useLabMutation, useLabQuery, useMay, useSession, wordsOf } from '@/components/api';
 import { MayNote } from '@/components/people/may-note';
 import { Body, Button, Field, IconButton, Label, Panel, ProblemNotice, Section, Select, Sheet, useToast } from '@/components/ui';
 import { changeLab, getLab } from '@/shared/contracts/people';
@@ -44,11 +44,13 @@ function LabSheet({ onClose, ...before }: { name: string; timeZone: string; onCl
   const { labId } = useLab();
   const queries = useQueryClient();
   const toast = useToast();
+  const { refresh } = useSession();
   const [name, setName] = useState(before.name);
   const [timeZone, setTimeZone] = useState(before.timeZone);
   const zones = [...new Set([before.timeZone, 'UTC', ...Intl.supportedValuesOf('timeZone')])].sort();
   const save = useLabMutation(changeLab, () => {
     void queries.invalidateQueries({ queryKey: labKey(labId, getLab) });
+    void refresh();
     toast.show({ text: 'The lab is changed.' });
     onClose();
   });

@@ -3,6 +3,7 @@ import { ScrollView, View } from 'react-native';
 import Svg, { Circle, Line } from 'react-native-svg';
 import { useTheme } from '@/components/theme';
 import { Body, Heading } from '@/components/ui';
+import { usePageTitle } from '@/components/ui/use-page-title';
 
 interface PublicPageProps {
   title: string;
@@ -12,6 +13,7 @@ interface PublicPageProps {
 
 /** The frame of the pages that need no session: the mark, one heading, one column. */
 export function PublicPage({ title, intro, children }: PublicPageProps) {
+  usePageTitle(title);
   return (
     <ScrollView
       role="main"

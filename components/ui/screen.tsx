@@ -1,8 +1,9 @@
-import type { ReactNode } from 'react';
+import { useEffect, useRef, type ReactNode } from 'react';
 import { Link, type Href } from 'expo-router';
 import { ScrollView, View } from 'react-native';
 import { Icon } from './icon';
 import { Heading } from './text';
+import { usePageTitle } from './use-page-title';
 import { useLow, useWide } from './use-wide';
 
 interface ScreenProps {
@@ -37,11 +38,14 @@ export function Screen({
   testID,
 }: ScreenProps) {
   const wide = useWide();
+  const main = useRef<View>(null);
+  usePageTitle(title);
+  useEffect(() => focusAfterNavigation(main.current as unknown as HTMLElement | null), []);
   const beside = wide && aside !== undefined;
   const inFlow = useLow() && footerGivesWay;
   return (
     <View className="min-h-0 flex-1 flex-row" testID={testID}>
-      <View role="main" className="min-w-0 flex-1">
+      <View ref={main} role="main" tabIndex={-1} className="ef-no-ring min-w-0 flex-1">
         <ScrollView className="flex-1" contentContainerClassName="pb-8" keyboardShouldPersistTaps="handled">
           <View className={`${gutter} gap-4 pt-2 wide:pt-4`}>
             <TitleBar title={title} back={back} trailing={trailing} />
@@ -68,6 +72,11 @@ export function Screen({
       ) : null}
     </View>
   );
+}
+
+/** The link that led here is gone, and the focus with it: it goes to the new screen, so that the keyboard and a screen reader go on from there. */
+function focusAfterNavigation(main: HTMLElement | null): void {
+  if (document.activeElement === document.body) main?.focus({ preventScroll: true });
 }
 
 function TitleBar({ title, back, trailing }: Pick<ScreenProps, 'title' | 'back' | 'trailing'>) {

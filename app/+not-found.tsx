@@ -1,0 +1,5 @@
+import { NotFoundScreen } from '@/components/shell/not-found-screen';
+
+export default function NotFound() {
+  return <NotFoundScreen />;
+}
