@@ -88,8 +88,9 @@ class Life {
     this.cancelRefresh();
     services.live.close();
     services.supervisor.close();
+    const crewStopped = inside.crew.stop();
     await inside.closeTasks();
-    await Promise.all([inside.crew.stop(), this.ticks?.stop()]);
+    await Promise.all([crewStopped, this.ticks?.stop()]);
     await inside.stations.close();
     inside.arms.close();
     await inside.background.idle();

@@ -16,8 +16,10 @@ class Lane {
   private worker: Worker | null = null;
   private readonly pending = new Map<number, Pending>();
   private count = 0;
+  private closed = false;
 
   call(task: WorkerCall['task'], args: unknown[]): Promise<unknown> {
+    if (this.closed) return Promise.reject(new Error('the server is ending'));
     const worker = (this.worker ??= this.begin());
     const id = (this.count += 1);
     return new Promise((resolve, reject) => {
@@ -27,6 +29,7 @@ class Lane {
   }
 
   async close(): Promise<void> {
+    this.closed = true;
     await this.worker?.terminate();
   }
 

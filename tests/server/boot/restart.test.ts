@@ -1,0 +1,114 @@
+import { demoIds } from '@/db/demo/seed';
+import type { ChainedEvent } from '@/shared/archive/run-records';
+import { databaseOfThisFile } from '@/tests/support/database';
+import { LabServer, quickProtocol } from '@/tests/support/lab-server';
+
+jest.setTimeout(60_000);
+
+const database = databaseOfThisFile();
+const runs = `/labs/${demoIds.lab}/runs`;
+let lab: LabServer;
+
+beforeAll(async () => {
+  lab = await LabServer.start(database());
+}, 60_000);
+afterEach(async () => {
+  const driver = lab.services.supervisor.activeOf(demoIds.rig);
+  if (driver === null) return;
+  await lab.intervene(driver.runId, 'stop');
+  await lab.advance(60_000, () => driver.isOver());
+});
+afterAll(() => lab.stop());
+
+/** Ends the server, lets time pass, and builds another on the same database and the same turntable. */
+async function restart(awayMs: number): Promise<void> {
+  const { world } = lab;
+  await lab.stop();
+  await world.clock.advance(awayMs);
+  lab = await LabServer.start(database(), { world });
+}
+
+const kindOf = (runId: string) => lab.services.supervisor.driverOf(runId)?.facts().current?.kind;
+const eventsOf = async (runId: string) => (await lab.as('viewer', 'GET', `${runs}/${runId}/events?limit=500`)).body.items as ChainedEvent[];
+const stepsOf = async (runId: string) =>
+  (await lab.as('viewer', 'GET', `${runs}/${runId}/steps`)).body.items as { path: string; outcome: string }[];
+
+describe.each(['dwell', 'swing'] as const)('a restart of the server in a %s', (kind) => {
+  test('of a run that says resume: it is carried on, the gap stands in the log, and it finishes', async () => {
+    const runId = await lab.run(quickProtocol({ onInterruption: 'resume' }));
+    await lab.advance(3_600_000, () => kindOf(runId) === kind);
+    await lab.advance(3_000);
+    await restart(8_000);
+    await lab.until(runId, 'finished');
+    const gap = (await eventsOf(runId)).find((event) => event.kind === 'server-restarted');
+    expect(gap?.data.gapS).toBeGreaterThanOrEqual(8);
+    expect((await stepsOf(runId)).filter(({ outcome }) => outcome === 'done' || outcome === 'late').map(({ path }) => path)).toEqual(
+      expect.arrayContaining(['1.home', '2.swing', '3.dwell', '4.swing', '5.dwell']),
+    );
+    const archive = await lab.as('viewer', 'GET', `${runs}/${runId}/archive.zip`);
+    expect(archive.status).toBe(200);
+  });
+
+  test('of a run that says hold: it is held, says why, and can be resumed', async () => {
+    const runId = await lab.run(quickProtocol({ onInterruption: 'hold' }));
+    await lab.advance(3_600_000, () => kindOf(runId) === kind);
+    await lab.advance(3_000);
+    await restart(8_000);
+    const view = await lab.until(runId, 'held');
+    expect(view.reason).toMatch(/server/i);
+    expect(lab.station().link.controller()?.moving).toBe(false);
+    await lab.intervene(runId, 'resume').expect(202);
+    await lab.until(runId, 'finished');
+  });
+
+  test('of a run that says stop: it is stopped', async () => {
+    const runId = await lab.run(quickProtocol({ onInterruption: 'stop' }));
+    await lab.advance(3_600_000, () => kindOf(runId) === kind);
+    await lab.advance(3_000);
+    await restart(8_000);
+    await lab.until(runId, 'stopped');
+  });
+});
+
+test('an arm that was ended stays ended over a restart, one that stands goes on standing', async () => {
+  await lab.arm();
+  await restart(1_000);
+  expect(lab.services.arms.armOf(demoIds.rig)?.name).toBe('Ilse Marrowby');
+  lab.world.controller(demoIds.rig).openInterlock();
+  await lab.advance(2_000);
+  lab.world.controller(demoIds.rig).closeInterlock();
+  await restart(1_000);
+  expect(lab.services.arms.armOf(demoIds.rig)).toBeNull();
+});
+
+test('a rehearsal in its worker thread that the end of the server cuts off is done again by the next one', async () => {
+  const protocolId = await lab.issue(quickProtocol());
+  const { world } = lab;
+  await lab.stop();
+  lab = await LabServer.start(database(), { world, overrides: { tasks: undefined } });
+  const asked = await lab.as('operator', 'POST', `/labs/${demoIds.lab}/rehearsals`).send({ rigId: demoIds.rig, protocolId, revision: 1 }).expect(202);
+  const runId = asked.body.id as string;
+  await lab.stop();
+  await world.clock.advance(10_000);
+  lab = await LabServer.start(database(), { world });
+  await lab.advance(61_000);
+  expect((await lab.view(runId)).state).toBe('finished');
+});
+
+test('the worker thread gives the same rehearsal as the thread of the tests', async () => {
+  const protocolId = await lab.issue(quickProtocol());
+  const ask = async () => {
+    const asked = await lab.as('operator', 'POST', `/labs/${demoIds.lab}/rehearsals`).send({ rigId: demoIds.rig, protocolId, revision: 1, seed: 5 }).expect(202);
+    await lab.services.idle();
+    await lab.advance(31_000);
+    const samples = await lab.as('viewer', 'GET', `${runs}/${asked.body.id as string}/samples?points=4000`).expect(200);
+    return { total: samples.body.total as number, value: samples.body.value as number[] };
+  };
+  const here = await ask();
+  const { world } = lab;
+  await lab.stop();
+  lab = await LabServer.start(database(), { world, overrides: { tasks: undefined } });
+  const there = await ask();
+  expect(here.total).toBeGreaterThan(500);
+  expect(there).toEqual(here);
+});
