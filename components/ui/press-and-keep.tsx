@@ -1,5 +1,5 @@
-import { useEffect, useRef, useState } from 'react';
-import { Pressable, View } from 'react-native';
+import { useEffect, useRef, useState, type PointerEvent } from 'react';
+import { View } from 'react-native';
 import { Button } from './button';
 import { Icon, type IconName } from './icon';
 import { Switch } from './switch';
@@ -19,7 +19,7 @@ interface PressAndKeepProps {
 }
 
 /**
- * For everything that makes masses move: the button is pressed and kept for 1.5 s, or, by keyboard and for whoever
+ * For everything that makes masses move: the button is pressed, kept for 1.5 s and let go, or, by keyboard and for whoever
  * cannot keep a press, a switch is set and then a button pressed. One press alone never moves anything.
  */
 export function PressAndKeep(props: PressAndKeepProps) {
@@ -65,6 +65,52 @@ function SwitchAndButton({ label, icon, statement, onConfirm, disabled = false, 
   );
 }
 
+type Stage = 'idle' | 'pressed' | 'ripe';
+
+/**
+ * The press counts when the finger is lifted on the button after 1.5 s: sliding off takes it back (WCAG 2.2, 2.5.2), and nothing that
+ * comes to lie under the finger meanwhile is tapped by letting go.
+ */
+function useKeptPress({ off, onConfirm }: { off: boolean; onConfirm: () => void }) {
+  const [stage, setStage] = useState<Stage>('idle');
+  const [early, setEarly] = useState(false);
+  const timer = useRef<ReturnType<typeof setTimeout>>(undefined);
+  useEffect(() => () => clearTimeout(timer.current), []);
+  const end = () => {
+    clearTimeout(timer.current);
+    setStage('idle');
+  };
+  return {
+    stage: off ? ('idle' as const) : stage,
+    early,
+    handlers: {
+      onPointerDown: (event: PointerEvent<HTMLDivElement>) => {
+        if (off || event.button > 0) return;
+        event.currentTarget.setPointerCapture?.(event.pointerId);
+        setEarly(false);
+        setStage('pressed');
+        timer.current = setTimeout(() => setStage('ripe'), keepMs);
+      },
+      onPointerUp: (event: PointerEvent<HTMLDivElement>) => {
+        if (off || stage === 'idle') return;
+        setEarly(stage === 'pressed');
+        if (stage === 'ripe' && isOn(event)) onConfirm();
+        end();
+      },
+      onPointerCancel: end,
+      // A long touch opens a menu on some phones, which would end the press.
+      onContextMenu: (event: { preventDefault: () => void }) => event.preventDefault(),
+    },
+  };
+}
+
+function isOn({ currentTarget, clientX, clientY }: PointerEvent<HTMLDivElement>): boolean {
+  const { left, right, top, bottom } = currentTarget.getBoundingClientRect();
+  return clientX >= left && clientX <= right && clientY >= top && clientY <= bottom;
+}
+
+const keepWords: Record<Stage, string | null> = { idle: null, pressed: 'Keep pressed', ripe: 'Now let go' };
+
 function KeepButton({
   label,
   icon,
@@ -74,54 +120,38 @@ function KeepButton({
   busy = false,
   testID,
 }: PressAndKeepProps & { onKeyboard: () => void }) {
-  const [keeping, setKeeping] = useState(false);
-  const [early, setEarly] = useState(false);
-  const timer = useRef<ReturnType<typeof setTimeout>>(undefined);
-  useEffect(() => () => clearTimeout(timer.current), []);
-  const begin = () => {
-    setEarly(false);
-    setKeeping(true);
-    timer.current = setTimeout(() => {
-      setKeeping(false);
-      onConfirm();
-    }, keepMs);
-  };
-  const end = () => {
-    clearTimeout(timer.current);
-    if (keeping) setEarly(true);
-    setKeeping(false);
-  };
   const off = disabled || busy;
-  const keys = {
-    onKeyDown: (event: { key: string; preventDefault: () => void }) =>
-      event.key === 'Enter' || event.key === ' ' ? (event.preventDefault(), onKeyboard()) : undefined,
+  const { stage, early, handlers } = useKeptPress({ off, onConfirm });
+  const onKeyDown = (event: { key: string; preventDefault: () => void }) => {
+    if (off || (event.key !== 'Enter' && event.key !== ' ')) return;
+    event.preventDefault();
+    onKeyboard();
   };
   return (
     <View className="gap-1">
-      <Pressable
+      <div
         role="button"
-        aria-label={`${label}: press and keep for 1.5 seconds`}
+        tabIndex={off ? -1 : 0}
+        aria-label={`${label}: press and keep for 1.5 seconds, then let go`}
         aria-busy={busy || undefined}
-        disabled={off}
-        onPressIn={begin}
-        onPressOut={end}
-        testID={testID}
-        {...keys}
-        className={`min-h-action select-none overflow-hidden rounded-action border-2 border-lamp bg-panel2 ${off ? 'opacity-50' : ''}`}
-        style={{ touchAction: 'none' } as object}
+        aria-disabled={off || undefined}
+        data-testid={testID}
+        {...handlers}
+        onKeyDown={onKeyDown}
+        className={`relative min-h-action touch-none select-none overflow-hidden rounded-action border-2 border-lamp bg-panel2 ${off ? 'opacity-50' : 'cursor-pointer'}`}
       >
-        {keeping ? (
+        {stage === 'idle' ? null : (
           <View className="ef-fill absolute inset-0 bg-lamp opacity-30" style={{ animationDuration: `${keepMs}ms` } as object} />
-        ) : null}
-        <View className="min-h-action flex-row items-center justify-center gap-2 px-5">
+        )}
+        <View className="pointer-events-none min-h-action flex-row items-center justify-center gap-2 px-5">
           {icon === undefined ? null : <Icon name={icon} size={24} tone="lamp" />}
-          <Body size={17} strong tone={keeping ? 'text' : 'lamp'}>
-            {busy ? 'Sending' : keeping ? 'Keep pressed' : label}
+          <Body size={17} strong tone={stage === 'idle' ? 'lamp' : 'text'}>
+            {busy ? 'Sending' : (keepWords[stage] ?? label)}
           </Body>
         </View>
-      </Pressable>
+      </div>
       <Label role="status" aria-live="polite" className="text-center">
-        {early ? 'Let go too early: nothing was sent. Keep it pressed for 1.5 s.' : 'Press and keep for 1.5 s.'}
+        {early ? 'Let go too early: nothing was sent. Keep it pressed for 1.5 s.' : 'Press and keep for 1.5 s, then let go.'}
       </Label>
     </View>
   );

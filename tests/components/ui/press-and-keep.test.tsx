@@ -11,27 +11,41 @@ afterEach(() => jest.useRealTimers());
 
 const button = () => screen.getByTestId('go');
 const wait = (ms: number) => act(() => jest.advanceTimersByTime(ms));
-/** The responder system waits a moment before it calls a touch a press. */
-const pressDelayMs = 50;
+const press = () => fireEvent.pointerDown(button());
+const letGo = (at: { clientX: number; clientY: number } = { clientX: 0, clientY: 0 }) =>
+  fireEvent(button(), new MouseEvent('pointerup', { bubbles: true, ...at }));
 
-test('a press kept for 1.5 s confirms once', () => {
-  fireEvent.mouseDown(button());
-  wait(pressDelayMs + 1499);
+test('a press kept for 1.5 s confirms once, when it is let go', () => {
+  press();
+  wait(1500);
+  expect(screen.getByText('Now let go')).toBeTruthy();
   expect(confirmed).not.toHaveBeenCalled();
-  wait(60);
+  letGo();
   expect(confirmed).toHaveBeenCalledTimes(1);
-  fireEvent.mouseUp(button());
   wait(5000);
+  letGo();
   expect(confirmed).toHaveBeenCalledTimes(1);
 });
 
 test('a press let go early confirms nothing and says so', () => {
-  fireEvent.mouseDown(button());
-  wait(900);
-  fireEvent.mouseUp(button());
+  press();
+  wait(1499);
+  letGo();
   wait(5000);
   expect(confirmed).not.toHaveBeenCalled();
   expect(screen.getByRole('status').textContent).toContain('Let go too early');
+});
+
+test('sliding off the button takes the press back', () => {
+  press();
+  wait(2000);
+  letGo({ clientX: 400, clientY: 400 });
+  expect(confirmed).not.toHaveBeenCalled();
+  press();
+  wait(2000);
+  fireEvent.pointerCancel(button());
+  letGo();
+  expect(confirmed).not.toHaveBeenCalled();
 });
 
 test('by keyboard a key does not confirm: it leads to a switch and then a button', () => {
