@@ -10,72 +10,23 @@ export function EditorToolbar() {
   const inRepeat = (editor.selected?.length ?? 0) > 1;
   return (
     <View role="toolbar" aria-label="Edit steps" className="flex-row items-center justify-between">
-      <IconButton
-        className="min-w-0 flex-1 wide:min-w-target"
-        icon="undo"
-        label="Undo"
-        onPress={() => editor.undo?.()}
-        disabled={editor.undo === null}
-        testID="undo"
-      />
-      <IconButton
-        className="min-w-0 flex-1 wide:min-w-target"
-        icon="redo"
-        label="Redo"
-        onPress={() => editor.redo?.()}
-        disabled={editor.redo === null}
-        testID="redo"
-      />
-      <IconButton
-        className="min-w-0 flex-1 wide:min-w-target"
-        icon="up"
-        label="Move up"
-        onPress={editor.moveUp}
-        disabled={none}
-        testID="move-up"
-      />
-      <IconButton
-        className="min-w-0 flex-1 wide:min-w-target"
-        icon="down"
-        label="Move down"
-        onPress={editor.moveDown}
-        disabled={none}
-        testID="move-down"
-      />
+      <IconButton shared icon="undo" label="Undo" onPress={() => editor.undo?.()} disabled={editor.undo === null} testID="undo" />
+      <IconButton shared icon="redo" label="Redo" onPress={() => editor.redo?.()} disabled={editor.redo === null} testID="redo" />
+      <IconButton shared icon="up" label="Move up" onPress={editor.moveUp} disabled={none} testID="move-up" />
+      <IconButton shared icon="down" label="Move down" onPress={editor.moveDown} disabled={none} testID="move-down" />
       {isRepeat || inRepeat ? (
         <IconButton
-          className="min-w-0 flex-1 wide:min-w-target"
+          shared
           icon="unnest"
           label={isRepeat ? 'Take the steps out of the repeat' : 'Take out of the repeat'}
           onPress={editor.unnest}
           testID="unnest"
         />
       ) : (
-        <IconButton
-          className="min-w-0 flex-1 wide:min-w-target"
-          icon="nest"
-          label="Put into a repeat"
-          onPress={editor.nest}
-          disabled={none}
-          testID="nest"
-        />
+        <IconButton shared icon="nest" label="Put into a repeat" onPress={editor.nest} disabled={none} testID="nest" />
       )}
-      <IconButton
-        className="min-w-0 flex-1 wide:min-w-target"
-        icon="duplicate"
-        label="Duplicate"
-        onPress={editor.duplicate}
-        disabled={none}
-        testID="duplicate"
-      />
-      <IconButton
-        className="min-w-0 flex-1 wide:min-w-target"
-        icon="remove"
-        label="Delete"
-        onPress={editor.remove}
-        disabled={none}
-        testID="delete"
-      />
+      <IconButton shared icon="duplicate" label="Duplicate" onPress={editor.duplicate} disabled={none} testID="duplicate" />
+      <IconButton shared icon="remove" label="Delete" onPress={editor.remove} disabled={none} testID="delete" />
     </View>
   );
 }

@@ -83,6 +83,8 @@ export interface IconButtonProps {
   disabled?: boolean;
   pressed?: boolean;
   tone?: keyof ThemeColors;
+  /** One of a row that shares the width: narrower than 48 px only where the page is narrower than seven of them. */
+  shared?: boolean;
   testID?: string;
   className?: string;
   children?: ReactNode;
@@ -96,6 +98,7 @@ export function IconButton({
   disabled = false,
   pressed,
   tone = 'text',
+  shared = false,
   testID,
   className = '',
   children,
@@ -109,7 +112,7 @@ export function IconButton({
       disabled={disabled}
       onPress={onPress}
       testID={testID}
-      className={`min-h-target min-w-target items-center justify-center rounded-action hover:bg-panel2 active:opacity-80 ${disabled ? 'opacity-40' : ''} ${pressed === true ? 'bg-panel2' : ''} ${className}`}
+      className={`min-h-target ${shared ? 'min-w-0 flex-1 wide:min-w-target' : 'min-w-target'} items-center justify-center rounded-action hover:bg-panel2 active:opacity-80 ${disabled ? 'opacity-40' : ''} ${pressed === true ? 'bg-panel2' : ''} ${className}`}
     >
       {children ?? <Icon name={icon} tone={tone} />}
     </Pressable>
