@@ -184,7 +184,9 @@ export class LabServer {
     return view;
   }
 
-  intervene(runId: string, what: 'hold' | 'hold-after-dwell' | 'resume' | 'stop', who: Role = 'operator', body: object = {}): request.Test {
+  /** Holds, resumes or stops a run as a member; `tappedAt` in ISO 8601. */
+  intervene(runId: string, what: 'hold' | 'hold-after-dwell' | 'resume' | 'stop', by: { who?: Role; tappedAt?: string } = {}): request.Test {
+    const { who = 'operator', ...body } = by;
     return this.as(who, 'POST', `/labs/${demoIds.lab}/runs/${runId}/${what}`).send(body);
   }
 

@@ -20,7 +20,7 @@ const make = async (name: string, of: ProtocolDocument = document(name)) => {
   const answer = await lab.as('operator', 'POST', protocols).send({ document: of }).expect(201);
   return { id: answer.body.id as string, etag: answer.headers.etag as string, body: answer.body };
 };
-const save = (id: string, etag: string, of: ProtocolDocument, who: 'operator' | 'keeper' = 'operator') => lab.as(who, 'PUT', `${protocols}/${id}`).set('If-Match', etag).send({ document: of });
+const save = ({ id, etag }: { id: string; etag: string }, of: ProtocolDocument, who: 'operator' | 'keeper' = 'operator') => lab.as(who, 'PUT', `${protocols}/${id}`).set('If-Match', etag).send({ document: of });
 const issue = (id: string, etag: string) => lab.as('operator', 'POST', `${protocols}/${id}/revisions`).set('If-Match', etag).send({ rigId: demoIds.rig, note: 'for tonight' });
 
 describe('a draft', () => {
@@ -29,7 +29,7 @@ describe('a draft', () => {
     expect(made.body).toMatchObject({ name: 'Two pairs', latestRevision: null, draftDiffers: true, stepCount: 4, updatedBy: 'Ilse Marrowby', revisions: [] });
     const read = await lab.as('viewer', 'GET', `${protocols}/${made.id}`).expect(200);
     expect(read.headers.etag).toBe(made.etag);
-    const saved = await save(made.id, made.etag, document('Two pairs, far', 'far')).expect(200);
+    const saved = await save(made, document('Two pairs, far', 'far')).expect(200);
     expect(saved.body).toMatchObject({ name: 'Two pairs, far', document: document('Two pairs, far', 'far') });
     expect(saved.headers.etag).not.toBe(made.etag);
     await lab.as('operator', 'DELETE', `${protocols}/${made.id}`).expect(204);
@@ -39,8 +39,8 @@ describe('a draft', () => {
   test('saved by two editors: the second is told who was faster and when, in the time of the lab, and nothing is overwritten', async () => {
     const made = await make('Shared');
     await lab.advance(60_000);
-    await save(made.id, made.etag, document('Shared', 'far'), 'keeper').expect(200);
-    const second = await save(made.id, made.etag, document('Mine')).expect(412);
+    await save(made, document('Shared', 'far'), 'keeper').expect(200);
+    const second = await save(made, document('Mine')).expect(412);
     const clock = new Intl.DateTimeFormat('en-GB', { timeZone: 'Europe/Zurich', hour: '2-digit', minute: '2-digit', second: '2-digit' }).format(lab.clock.utcMs());
     expect(second.body).toMatchObject({ code: 'edited-meanwhile' });
     expect(second.body.detail).toContain(`Casimir Thornquist saved this protocol at ${clock} Fri, Europe/Zurich`);
@@ -49,13 +49,13 @@ describe('a draft', () => {
 
   test('saved by both at the same instant: one gets through', async () => {
     const made = await make('Race');
-    const answers = await Promise.all([save(made.id, made.etag, document('One')), save(made.id, made.etag, document('Two'), 'keeper')]);
+    const answers = await Promise.all([save(made, document('One')), save(made, document('Two'), 'keeper')]);
     expect(answers.map(({ status }) => status).sort()).toEqual([200, 412]);
   });
 
   test('saved unchanged keeps its version', async () => {
     const made = await make('Same');
-    expect((await save(made.id, made.etag, document('Same')).expect(200)).headers.etag).toBe(made.etag);
+    expect((await save(made, document('Same')).expect(200)).headers.etag).toBe(made.etag);
   });
 
   test('with an unknown field is refused at its place', async () => {
@@ -70,7 +70,7 @@ describe('a revision', () => {
     const first = await issue(made.id, made.etag).expect(201);
     expect(first.body).toMatchObject({ number: 1, note: 'for tonight', issuedBy: 'Ilse Marrowby', document: document('Issued'), sha256: sha256(canonicalize(document('Issued')) ?? '') });
     expect((await lab.as('viewer', 'GET', `${protocols}/${made.id}`)).body).toMatchObject({ latestRevision: 1, draftDiffers: false });
-    const saved = await save(made.id, made.etag, document('Issued', 'far')).expect(200);
+    const saved = await save(made, document('Issued', 'far')).expect(200);
     expect(saved.body.draftDiffers).toBe(true);
     const second = await issue(made.id, saved.headers.etag as string).expect(201);
     expect(second.body.number).toBe(2);
@@ -87,7 +87,7 @@ describe('a revision', () => {
 
   test('of a draft that somebody saved meanwhile is not issued', async () => {
     const made = await make('Late');
-    await save(made.id, made.etag, document('Late', 'far'), 'keeper').expect(200);
+    await save(made, document('Late', 'far'), 'keeper').expect(200);
     expect((await issue(made.id, made.etag).expect(412)).body.code).toBe('edited-meanwhile');
   });
 

@@ -100,11 +100,12 @@ describe('arming', () => {
     expect(await armOf()).toBeNull();
   });
 
+  const turntable = () => lab.world.controller(demoIds.rig);
   test.each([
-    ['the interlock opens', () => lab.world.controller(demoIds.rig).openInterlock(), () => lab.world.controller(demoIds.rig).closeInterlock(), 'interlock'],
-    ['the motor supply is lost', () => lab.world.controller(demoIds.rig).loseSupply(), () => lab.world.controller(demoIds.rig).returnSupply(), 'supply'],
-    ['the controller restarts', () => lab.world.controller(demoIds.rig).reset(), () => undefined, 'controller'],
-  ])('is void when %s', async (_, happen, undo, word) => {
+    { what: 'the interlock opens', happen: () => turntable().openInterlock(), undo: () => turntable().closeInterlock(), word: 'interlock' },
+    { what: 'the motor supply is lost', happen: () => turntable().loseSupply(), undo: () => turntable().returnSupply(), word: 'supply' },
+    { what: 'the controller restarts', happen: () => turntable().reset(), undo: () => undefined, word: 'controller' },
+  ])('is void when $what', async ({ happen, undo, word }) => {
     await arm({ until: inHours(2) }).expect(201);
     happen();
     await lab.advance(10_000);

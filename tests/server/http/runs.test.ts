@@ -1,5 +1,7 @@
 import { unzipSync } from 'fflate';
+import type { Response } from 'supertest';
 import { demoIds } from '@/db/demo/seed';
+import type { ChainedEvent } from '@/shared/archive/run-records';
 import { readArchive } from '@/shared/archive/read-archive';
 import { verifyChain } from '@/shared/archive/chain';
 import { runSummarySchema } from '@/shared/contracts/runs';
@@ -103,14 +105,14 @@ describe('a run', () => {
     const view = await lab.view(runId);
     expect(view).toMatchObject({ state: 'finished', dwellsDone: 2, reason: '', current: null, mayResume: { ok: false } });
 
-    const events = [];
+    const events: ChainedEvent[] = [];
     let path: string | null = `${runs}/${runId}/events?limit=5`;
     while (path !== null) {
-      const page = await lab.as('viewer', 'GET', path).expect(200);
+      const page: Response = await lab.as('viewer', 'GET', path).expect(200);
       events.push(...page.body.items);
       path = page.headers.link === undefined ? null : (/<\/api([^>]+)>/.exec(page.headers.link as string)?.[1] ?? null);
     }
-    expect(events.at(-1).seq).toBe(view.lastSeq);
+    expect(events.at(-1)?.seq).toBe(view.lastSeq);
     expect(() => verifyChain(events, sha256)).not.toThrow();
 
     const csv = await lab.as('viewer', 'GET', `${runs}/${runId}/steps.csv`).expect(200);
@@ -133,19 +135,19 @@ describe('a run', () => {
   test('is held, resumed and stopped; each act shows who, when, and when the controller confirmed', async () => {
     const runId = await lab.run(quickProtocol());
     await lab.advance(3_600_000, () => lab.services.supervisor.driverOf(runId)?.facts().current?.kind === 'dwell');
-    const held = await lab.intervene(runId, 'hold', 'viewer').expect(202);
+    const held = await lab.intervene(runId, 'hold', { who: 'viewer' }).expect(202);
     expect(held.body).toEqual({ runId, serverAt: iso(0) });
     const view = await lab.until(runId, 'held');
     expect(view.intervention).toMatchObject({ kind: 'hold', by: 'Pim Oldershaw', serverAt: held.body.serverAt, confirmedAt: expect.any(String) });
     expect(view.mayResume).toEqual({ ok: true, why: '' });
-    await lab.intervene(runId, 'hold', 'viewer').expect(202);
+    await lab.intervene(runId, 'hold', { who: 'viewer' }).expect(202);
 
-    const late = await lab.intervene(runId, 'resume', 'operator', { tappedAt: iso(-6_000) }).expect(409);
+    const late = await lab.intervene(runId, 'resume', { tappedAt: iso(-6_000) }).expect(409);
     expect(late.body.detail).toContain('it counts for 5 s');
-    await lab.intervene(runId, 'resume', 'operator', { tappedAt: iso(-100) }).expect(202);
+    await lab.intervene(runId, 'resume', { tappedAt: iso(-100) }).expect(202);
     await lab.until(runId, 'running');
     await lab.advance(3_600_000, () => lab.services.supervisor.driverOf(runId)?.facts().current?.kind === 'swing');
-    const stopped = await lab.intervene(runId, 'stop', 'analyst').expect(202);
+    const stopped = await lab.intervene(runId, 'stop', { who: 'analyst' }).expect(202);
     await lab.until(runId, 'stopped');
     const end = await lab.view(runId);
     expect(end.intervention).toMatchObject({ kind: 'stop', by: 'Tam Ferrowdale', serverAt: stopped.body.serverAt, confirmedAt: expect.any(String) });
@@ -210,7 +212,7 @@ describe('hold and stop', () => {
       Object.assign(pool, { connect: away, query: away });
       expect((await lab.as('viewer', 'GET', runs).expect(503)).body.code).toBe('database-away');
       expect(lab.station().link.controller()?.moving).toBe(true);
-      await lab.intervene(runId, 'stop', 'viewer').expect(202);
+      await lab.intervene(runId, 'stop', { who: 'viewer' }).expect(202);
       await lab.advance(5_000);
       expect(lab.station().link.controller()?.moving).toBe(false);
       Object.assign(pool, working);
@@ -223,7 +225,7 @@ describe('hold and stop', () => {
     const runId = await lab.run(quickProtocol());
     const viewer = '5eed0000-0000-4000-8000-000000000005';
     await lab.as('viewer', 'DELETE', '/session').expect(204);
-    expect((await lab.intervene(runId, 'hold', 'viewer').expect(401)).body.code).toBe('session-expired');
+    expect((await lab.intervene(runId, 'hold', { who: 'viewer' }).expect(401)).body.code).toBe('session-expired');
     await lab.signIn(viewer);
   });
 });
