@@ -9,7 +9,15 @@ export type Size = keyof typeof sizes;
 
 const screens = join(__dirname, '..', '..', 'test-output', 'screens');
 
-const flags = ['--no-sandbox', '--disable-gpu', '--disable-quic', '--no-first-run', '--disable-background-networking', '--disable-component-update', '--disable-sync'];
+const flags = [
+  '--no-sandbox',
+  '--disable-gpu',
+  '--disable-quic',
+  '--no-first-run',
+  '--disable-background-networking',
+  '--disable-component-update',
+  '--disable-sync',
+];
 
 export interface Browser {
   page: Page;
@@ -32,6 +40,8 @@ export async function openBrowser(baseURL: string, size: Size): Promise<Browser>
     acceptDownloads: true,
     timezoneId: 'Europe/Zurich',
     locale: 'en-GB',
+    colorScheme: 'dark',
+    reducedMotion: 'reduce',
     ...(size === 'phone' ? { isMobile: true, hasTouch: true } : {}),
   });
   await context.addInitScript({ content: 'globalThis.__name = (f) => f;' });

@@ -1,0 +1,96 @@
+import { main } from '@/server/boot/evaluate';
+import type { EvaluationResult } from '@/shared/evaluation/result';
+import { sizes, type Size } from '../support/browser';
+import { chapters, Hand, numberOf, plain } from './support/hand';
+import { labOfThisFile } from './support/lab';
+import { finishedNight } from './support/night';
+
+/** Story 8: a finished night is evaluated, and an outsider recomputes it from the archive. */
+
+jest.setTimeout(120_000);
+const lab = labOfThisFile();
+const nights = new Map<Size, string>();
+
+/** `6.674(15) × 10⁻¹¹`, as people read it: the digits in brackets stand at the last places of the value. */
+function readUncertain(text: string): { value: number; u: number } {
+  const match = /(-?\d[\d .]*)\((\d+)\) ?× ?10([⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+)/.exec(plain(text));
+  if (match === null) throw new Error(`no number with its uncertainty in "${text}"`);
+  const digits = (match[1] ?? '').replaceAll(' ', '');
+  const exponent = Number((match[3] ?? '').replace(/./g, (sign) => (sign === '⁻' ? '-' : String('⁰¹²³⁴⁵⁶⁷⁸⁹'.indexOf(sign)))));
+  const decimals = digits.split('.')[1]?.length ?? 0;
+  return { value: Number(`${digits}e${String(exponent)}`), u: Number(`${match[2] ?? ''}e${String(exponent - decimals)}`) };
+}
+
+describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
+  let hand: Hand;
+  const chapter = chapters(() => hand);
+  beforeAll(async () => {
+    nights.set(size, await finishedNight(lab(), 2));
+    hand = new Hand(await lab().open(size, 'analyst'));
+  }, 120_000);
+  afterAll(async () => {
+    expect(hand.browser.errors).toEqual([]);
+    await lab().close(hand.browser);
+  });
+
+  chapter('G comes out in the notation of the GUM, beside the recommended value', async () => {
+    await hand.goes(`/runs/${nights.get(size) ?? ''}`, 'result-screen');
+    await hand.taps('evaluate');
+    await hand.sees('G so far');
+    await hand.tapsOn('Evaluation', 'link');
+    await hand.at('evaluation-screen').waitFor();
+    const shown = readUncertain(await hand.reads('g-value', '×'));
+    // The simulated pendulum of the demo rig obeys the CODATA 2022 value, 6.674 30e-11.
+    expect(Math.abs(shown.value - 6.6743e-11)).toBeLessThan(3 * shown.u);
+    expect(shown.u / shown.value).toBeLessThan(0.05);
+    expect(await hand.reads('g-panel')).toContain('m³ kg⁻¹ s⁻²');
+    expect(await hand.reads('en')).toMatch(/^En .*CODATA 2022: agrees/);
+    expect(await hand.reads('registered')).toBe('as registered');
+    await hand.shoots('evaluation');
+  });
+
+  chapter('every dwell shows its fit and what the fit leaves', async () => {
+    expect(await hand.page.getByTestId('dwell-row').count()).toBe(4);
+    await hand.hears('fit-plot', /^Dwell 4 at far: fit to \d+ bins over 13 min \d+ s, residual [\d.]+ µrad rms/);
+    await hand.tapsOn('Next dwell');
+    await hand.hears('fit-plot', /^Dwell 6 at near/);
+    expect(await hand.reads('figures')).toMatch(/near − far, \d reversal.*damped period.*decay time/);
+    await hand.at('fit-panel').scrollIntoViewIfNeeded();
+    await hand.shoots('fit');
+  });
+
+  chapter('the budget names each input with its share, and the chain is whole', async () => {
+    await hand.taps('budget-table-toggle');
+    const rows = hand.page.getByTestId('budget-row');
+    expect(await rows.count()).toBeGreaterThan(8);
+    const shares = (await rows.locator('td:last-child').allTextContents()).map((text) => numberOf(/^([\d. ]+) %$/.exec(plain(text))?.[1]));
+    expect(shares.reduce((sum, share) => sum + share, 0)).toBeGreaterThan(97);
+    expect(shares.reduce((sum, share) => sum + share, 0)).toBeLessThan(103);
+    expect([...shares].sort((a, b) => b - a)).toEqual(shares);
+    await hand.at('budget-table').scrollIntoViewIfNeeded();
+    await hand.shoots('budget');
+    expect(await hand.reads('chain')).toMatch(/The chain of \d+ events is whole and unchanged/);
+  });
+
+  chapter('the command gives the same G from the downloaded archive', async () => {
+    const [download] = await Promise.all([hand.page.waitForEvent('download'), hand.taps('archive')]);
+    expect(download.suggestedFilename()).toMatch(/\.zip$/);
+    const said: string[] = [];
+    const refused: string[] = [];
+    const code = main([await savedAs(download)], { out: (text) => said.push(text), err: (text) => refused.push(text) });
+    expect({ code, refused }).toEqual({ code: 0, refused: [] });
+    const result = JSON.parse(said.join('')) as EvaluationResult;
+    const shown = readUncertain(await hand.reads('g-value', '×'));
+    // Shown to two digits of the uncertainty: half a last digit is a quarter of a tenth of u at most.
+    expect(Math.abs((result.G?.value ?? NaN) - shown.value)).toBeLessThan(0.06 * shown.u);
+    expect(Math.abs((result.G?.u ?? NaN) - shown.u)).toBeLessThan(0.06 * shown.u);
+    expect(result.chain.valid).toBe(true);
+  });
+});
+
+/** The command tells an archive by its name. */
+async function savedAs(download: { path(): Promise<string>; saveAs(path: string): Promise<void> }): Promise<string> {
+  const path = `${await download.path()}.zip`;
+  await download.saveAs(path);
+  return path;
+}

@@ -1,0 +1,159 @@
+import { demoIds } from '@/db/demo/seed';
+import type { ChainedEvent } from '@/shared/archive/run-records';
+import type { RunView } from '@/shared/contracts/runs';
+import { sizes, type Size } from '../support/browser';
+import { chapters, Hand, until } from './support/hand';
+import { labOfThisFile, type Lab } from './support/lab';
+import { Network } from './support/network';
+import { issued, read, shortNight } from './support/night';
+
+/** Story 4: a run is started, watched, held, resumed and stopped; on a bad network too. */
+
+jest.setTimeout(120_000);
+const lab = labOfThisFile();
+let protocol: { protocolId: string; revision: number };
+beforeAll(async () => {
+  protocol = await issued(lab(), shortNight('Watched night', 4));
+}, 60_000);
+
+const stillWords = /standing still/;
+const viewOf = (runId: string): Promise<RunView> => read(lab(), runId);
+const eventsOf = async (runId: string, kind: string): Promise<ChainedEvent[]> =>
+  ((await read(lab(), `${runId}/events?limit=200`)) as { items: ChainedEvent[] }).items.filter((event) => event.kind === kind);
+
+describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
+  let hand: Hand;
+  let runId: string;
+  let network: Network;
+  const chapter = chapters(() => hand);
+  beforeAll(async () => {
+    network = await Network.to(lab().address);
+    hand = new Hand(await lab().open(size, 'operator', network.address));
+  });
+  afterAll(async () => {
+    expect(hand.browser.errors).toEqual([]);
+    await lab().close(hand.browser);
+    await network.close();
+  });
+
+  chapter('nothing starts on a rig that nobody on site answers for', async () => {
+    await hand.goes(`/rigs/${demoIds.rig}/start?protocol=${protocol.protocolId}&revision=1`, 'start-screen');
+    await hand.reads('check-armed', 'Nobody on site answers for the rig: arm it there first.');
+    expect(await hand.isEnabled('start-run')).toBe(false);
+    await hand.sees('Something above stands against a start.');
+    await hand.shoots('start-not-armed');
+  });
+
+  chapter('whoever arms it signs the cautions', async () => {
+    await hand.taps('arm-here');
+    await hand.at('arm-sheet').waitFor();
+    for (const caution of ['Heavy masses', 'Lead', 'Laser', 'Belt and turntable', 'Mains', 'Emergency stop'])
+      await hand.reads('arm-sheet', caution);
+    expect(await hand.isEnabled('arm-confirm')).toBe(false);
+    await hand.taps('arm-on-site');
+    expect(await hand.isEnabled('arm-confirm')).toBe(false);
+    await hand.taps('arm-cautions');
+    await hand.shoots('arm');
+    await hand.taps('arm-confirm');
+    await hand.at('arm-sheet').waitFor({ state: 'detached' });
+    await hand.reads('check-armed', /By Ilse Marrowby until/);
+    await until(() => hand.isEnabled('start-run'), 'the start to be allowed');
+    await hand.at('start-run').scrollIntoViewIfNeeded();
+    await hand.shoots('start');
+  });
+
+  chapter('a tap starts nothing; a press that is kept starts the run', async () => {
+    await hand.keeps('start-run', 300);
+    await hand.sees('Let go too early: nothing was sent.');
+    expect((await read(lab(), '?active=true&limit=20')).items).toEqual([]);
+    await hand.keeps('start-run');
+    await hand.at('run-screen').waitFor();
+    runId = new URL(hand.page.url()).pathname.split('/').at(-1) ?? '';
+  });
+
+  chapter('the run is seen live: what it does, how long still, deflection, turntable, and how old all this is', async () => {
+    await lab().pass(60);
+    await hand.reads('run-state', 'Dwell, far side');
+    expect(await hand.reads('time-left', /^1\d:\d\d$/)).toMatch(/^1[23]:/);
+    await hand.reads('link-chip', /live \d\.\d s/);
+    await hand.reads('deflection-now', /[+−]\d.*rad/);
+    await hand.reads('turntable-angle', '−20.18°');
+    await hand.hears('live-strip', /4 near dwells and 4 far dwells.*Now: dwell at far.*measured deflection/);
+    await hand.shoots('run');
+  });
+
+  chapter('a hold says that the server has it before it says that the turntable stands still', async () => {
+    await lab().pass(825, () => lab().server.station().link.controller()?.moving === true);
+    await hand.reads('run-state', 'Swing to near');
+    const flow = lab().freeze();
+    await hand.taps('hold');
+    await hand.reads('intervention-stages', /Server has it\d\d:\d\d:\d\d\.\d{3}/);
+    // No lab time has passed, so the controller cannot have answered, and the page must not claim it did.
+    expect(await hand.reads('intervention-stages')).not.toMatch(stillWords);
+    expect(await hand.reads('run-state')).not.toMatch(/^Held/);
+    await hand.shoots('hold-sent');
+    flow();
+    await hand.reads('intervention-stages', /Controller: standing still\d\d:\d\d:\d\d\.\d{3}/);
+    await hand.reads('run-state', 'Held');
+    await hand.reads('held-notice', 'Ilse Marrowby asked to hold.');
+    expect((await viewOf(runId)).state).toBe('held');
+    await hand.shoots('held');
+  });
+
+  chapter('a resume is reviewed, kept pressed, and goes on with the swing', async () => {
+    await hand.taps('resume');
+    await hand.reads('resume-sheet', 'The source masses will move.');
+    await hand.shoots('resume');
+    await hand.keeps('resume-confirm');
+    await hand.at('resume-sheet').waitFor({ state: 'detached' });
+    await lab().pass(15);
+    await hand.reads('run-state', /Dwell, near side/);
+    expect(await eventsOf(runId, 'resumed')).toHaveLength(1);
+  });
+
+  chapter('hold after this dwell cuts nothing short', async () => {
+    await hand.taps('hold-after-dwell');
+    await hand.sees('Will hold when this dwell has ended. Nothing is cut short.');
+    expect(await hand.reads('run-state')).toMatch(/Dwell, near side/);
+    await hand.shoots('hold-after-dwell');
+    await passUntil(lab(), async () => (await viewOf(runId)).state === 'held');
+    await hand.reads('run-state', 'Held');
+    const { items } = await read(lab(), `${runId}/steps`);
+    expect(items.at(-1)).toMatchObject({ kind: 'dwell', station: 'near', outcome: 'done', good: true });
+    await hand.taps('resume');
+    await hand.keeps('resume-confirm');
+    await hand.at('resume-sheet').waitFor({ state: 'detached' });
+    await hand.reads('run-state', /Swing|Dwell/);
+  });
+
+  chapter('without a network stop stays, says so, tries again by itself and acts once', async () => {
+    network.become('cut');
+    await hand.reads('lost-notice', /Nothing heard from the server/);
+    expect(await hand.isEnabled('stop')).toBe(true);
+    await hand.shoots('no-network');
+    // From here on the server hears the page, but the page hears nothing.
+    network.become('deaf');
+    await hand.taps('stop');
+    await hand.reads('intervention-stages', /^(?!.*standing still).*trying again.*use the switch at the rig/);
+    expect(await hand.isEnabled('stop')).toBe(true);
+    await until(async () => (await eventsOf(runId, 'stop-requested')).length > 0, 'a stop to reach the server');
+    expect(await hand.reads('intervention-stages')).not.toMatch(stillWords);
+    await hand.shoots('stop-trying');
+    network.become('open');
+    await hand.at('result-screen').waitFor();
+    await hand.reads('headline', /Stopped at \d\d:\d\d/);
+    expect(await eventsOf(runId, 'stop-requested')).toHaveLength(1);
+    await hand.shoots('stopped');
+  });
+
+  chapter('after a stop the rig is no longer armed', async () => {
+    await hand.goes(`/rigs/${demoIds.rig}`, 'rig-screen');
+    await hand.sees('Not armed.');
+    expect((await viewOf(runId)).state).toBe('stopped');
+  });
+});
+
+/** Lets lab time pass in short strides until something is so. */
+async function passUntil(place: Lab, holds: () => Promise<boolean>): Promise<void> {
+  for (let strides = 0; strides < 60 && !(await holds()); strides += 1) await place.pass(20);
+}

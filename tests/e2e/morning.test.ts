@@ -1,0 +1,105 @@
+import { readFileSync } from 'node:fs';
+import { parse } from 'csv-parse/sync';
+import type { StepRowView } from '@/shared/contracts/runs';
+import { sizes, type Size } from '../support/browser';
+import { chapters, Hand, plain } from './support/hand';
+import { labOfThisFile } from './support/lab';
+import { finishedNight, read } from './support/night';
+
+/** Story 6: the morning after a finished night; what came of it, and the step log behind it. */
+
+jest.setTimeout(120_000);
+const lab = labOfThisFile();
+let runId: string;
+beforeAll(async () => {
+  runId = await finishedNight(lab());
+}, 120_000);
+
+describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
+  let hand: Hand;
+  const chapter = chapters(() => hand);
+  beforeAll(async () => {
+    hand = new Hand(await lab().open(size, 'analyst'));
+  });
+  afterAll(async () => {
+    expect(hand.browser.errors).toEqual([]);
+    await lab().close(hand.browser);
+  });
+
+  chapter('the list of runs leads to the result: that it finished, when, and how many dwells were good', async () => {
+    await hand.goes('/runs', 'runs-screen');
+    await hand.sees('Short night');
+    await hand.shoots('runs');
+    await hand.taps('run-row');
+    await hand.at('result-screen').waitFor();
+    expect(await hand.reads('headline', 'Finished at')).toMatch(/Finished at \d\d:\d\d/);
+    expect(await hand.reads('headline')).toMatch(/Europe\/Zurich, after 56 min/);
+    expect(await hand.reads('figures', 'good dwells')).toMatch(/^4 of 4/);
+    await hand.hears('night-strip', /2 near dwells and 2 far dwells.*4 of 4 dwells done.*The solid line is the measured deflection/);
+    await hand.shoots('result');
+  });
+
+  chapter('the step log gives planned and actual times with their uncertainty', async () => {
+    await hand.tapsOn('Step log', 'link');
+    await hand.at('step-log').waitFor();
+    await hand.sees('10 rows');
+    const rows = hand.page.getByTestId('step-row');
+    expect(await rows.count()).toBe(10);
+    const swing = plain((await rows.nth(2).textContent()) ?? '');
+    expect(swing).toMatch(/Swing to far/);
+    // Start and end: a clock time, its standard uncertainty, the plan and the difference.
+    expect(swing.match(/\d\d:\d\d:\d\d\.\d{3} \d{3}± \d+ µs/g)).toHaveLength(2);
+    expect(swing.match(/plan \d\d:\d\d:\d\d[+−]\d+ ms/g)).toHaveLength(2);
+    await hand.shoots('step-log');
+    await hand.tapsOn('UTC', 'radio');
+    await hand.sees('times in UTC');
+    await hand.taps('events-3');
+    await hand.sees(/events\. Head of the chain/);
+  });
+
+  chapter('the filter leaves what was asked for, and says so', async () => {
+    if (size === 'phone') await hand.taps('filter');
+    await hand.chooses('filter-kind', 'dwell');
+    await hand.sees('4 of 10 rows');
+    await hand.chooses('filter-station', 'near');
+    await hand.sees('2 of 10 rows');
+    expect(await hand.page.getByTestId('step-row').count()).toBe(2);
+    await hand.chooses('filter-kind', 'home');
+    await hand.sees('No row like that');
+    await hand.shoots('filter');
+    await hand.tapsOn('Show all rows');
+    await hand.sees('10 rows');
+  });
+
+  chapter('the CSV holds the same log', async () => {
+    const [download] = await Promise.all([hand.page.waitForEvent('download'), hand.taps('download')]);
+    expect(download.suggestedFilename()).toMatch(/\.csv$/);
+    const table: Record<string, string>[] = parse(readFileSync(await download.path(), 'utf8'), { columns: true });
+    const { items } = (await read(lab(), `${runId}/steps`)) as { items: StepRowView[] };
+    expect(table).toHaveLength(items.length);
+    const facts = table.map((row) => ({
+      seq: Number(row.seq),
+      path: row.path,
+      kind: row.kind,
+      station: row.station,
+      outcome: row.outcome,
+      startUtcMs: Date.parse(row.start_utc ?? ''),
+      endUtcMs: Date.parse(row.end_utc ?? ''),
+      uStartS: Number(row.u_start_s),
+      angleEndDeg: Number(row.angle_end_deg),
+    }));
+    expect(facts).toEqual(
+      items.map((item) => ({
+        seq: item.seq,
+        path: item.path,
+        kind: item.kind,
+        station: item.station,
+        outcome: item.outcome,
+        startUtcMs: Math.floor(item.startUtcMs),
+        endUtcMs: Math.floor(item.endUtcMs ?? NaN),
+        uStartS: item.uStartS,
+        angleEndDeg: item.angleEndDeg,
+      })),
+    );
+  });
+});

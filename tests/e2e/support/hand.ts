@@ -1,0 +1,155 @@
+import type { Locator } from 'playwright-core';
+import { shoot, type Browser } from '../../support/browser';
+
+/** How long a press that moves masses is kept: the 1.5 s that the page asks for, and a little. */
+const keptMs = 1650;
+
+/** Text as it is compared: the narrow spaces of numbers and units as plain ones. */
+export const plain = (text: string) => text.replace(/[\u00a0\u2009\u202f]/g, ' ').trim();
+
+/** A number as it is printed, digits in groups of three, as a number. */
+export const numberOf = (text: string | undefined): number => Number((text ?? '').replace(/\s/g, '').replace('−', '-'));
+
+/** The same words with any kind of space between them. */
+const loose = (words: string | RegExp) =>
+  new RegExp((typeof words === 'string' ? words.replace(/[.*+?^${}()|[\]\\]/g, '\\$&') : words.source).replaceAll(' ', '\\s'));
+
+/** A person at a page: taps on a phone, clicks at a desk, reads what is there. */
+export class Hand {
+  constructor(readonly browser: Browser) {}
+
+  get context() {
+    return this.browser.context;
+  }
+
+  get page() {
+    return this.browser.page;
+  }
+
+  at(testId: string): Locator {
+    return this.page.getByTestId(testId).first();
+  }
+
+  async goes(path: string, arrives: string): Promise<void> {
+    await this.page.goto(path);
+    await this.at(arrives).waitFor();
+  }
+
+  async taps(target: string | Locator): Promise<void> {
+    const place = typeof target === 'string' ? this.at(target) : target;
+    await (this.browser.size === 'phone' ? place.tap() : place.click());
+  }
+
+  async tapsOn(name: string | RegExp, role: 'button' | 'link' | 'radio' | 'checkbox' = 'button'): Promise<void> {
+    await this.taps(this.page.getByRole(role, { name, exact: typeof name === 'string' }).first());
+  }
+
+  /** Presses and keeps, with a finger or with the mouse, for `ms`. */
+  async keeps(testId: string, ms = keptMs): Promise<void> {
+    const place = this.at(testId);
+    await place.scrollIntoViewIfNeeded();
+    const box = await place.boundingBox();
+    if (box === null) throw new Error(`${testId} is not on the page`);
+    const point = { x: box.x + box.width / 2, y: box.y + box.height / 2 };
+    if (this.browser.size === 'wide') {
+      await this.page.mouse.move(point.x, point.y);
+      await this.page.mouse.down();
+      await this.page.waitForTimeout(ms);
+      await this.page.mouse.up();
+      return;
+    }
+    const finger = await this.browser.context.newCDPSession(this.page);
+    await finger.send('Input.dispatchTouchEvent', { type: 'touchStart', touchPoints: [point] });
+    await this.page.waitForTimeout(ms);
+    await finger.send('Input.dispatchTouchEvent', { type: 'touchEnd', touchPoints: [] });
+    await finger.detach();
+  }
+
+  /** Chooses an option of a list by its label, or by its value. */
+  async chooses(testId: string, option: string): Promise<void> {
+    await this.at(testId).selectOption(option);
+  }
+
+  async types(testId: string, text: string): Promise<void> {
+    await this.at(testId).fill(text);
+  }
+
+  /** Waits until the page shows the words. */
+  async sees(words: string | RegExp): Promise<void> {
+    await this.page.getByText(loose(words)).filter({ visible: true }).first().waitFor();
+  }
+
+  /** Waits until an element says something, and returns all that it says. */
+  async reads(testId: string, words: RegExp | string = /./): Promise<string> {
+    let last = '';
+    await until(
+      async () => {
+        last = plain((await this.at(testId).textContent()) ?? '');
+        return typeof words === 'string' ? last.includes(words) : words.test(last);
+      },
+      () => `${testId} to say ${String(words)}; it says "${last}"`,
+    );
+    return last;
+  }
+
+  /** Waits until a picture in an element says something to those who do not see it, and returns it. */
+  async hears(testId: string, words: RegExp): Promise<string> {
+    let last = '';
+    await until(
+      async () => {
+        last = plain((await this.at(testId).locator('[role="img"]').first().getAttribute('aria-label')) ?? '');
+        return words.test(last);
+      },
+      () => `${testId} to tell ${String(words)}; it tells "${last}"`,
+    );
+    return last;
+  }
+
+  async isEnabled(testId: string): Promise<boolean> {
+    return this.at(testId).isEnabled();
+  }
+
+  async shoots(name: string): Promise<void> {
+    await shoot(this.browser, name);
+  }
+
+  /** Presses Tab until the focus is in the element, as somebody without a mouse does. */
+  async tabsTo(testId: string, key = 'Tab'): Promise<void> {
+    for (let presses = 0; presses < 120; presses += 1) {
+      if (await this.page.evaluate((id) => document.activeElement?.closest(`[data-testid="${id}"]`) != null, testId)) return;
+      await this.page.keyboard.press(key);
+    }
+    throw new Error(`the keyboard does not lead to ${testId}`);
+  }
+}
+
+/** Waits until a condition holds, looking again often. */
+export async function until(holds: () => Promise<boolean> | boolean, what: string | (() => string), withinMs = 20_000): Promise<void> {
+  const endMs = performance.now() + withinMs;
+  for (;;) {
+    if (await holds()) return;
+    if (performance.now() > endMs) throw new Error(`waited ${String(withinMs / 1000)} s for ${typeof what === 'string' ? what : what()}`);
+    await new Promise((resolve) => setTimeout(resolve, 50));
+  }
+}
+
+/**
+ * Tests that tell one story in order: each needs what the ones before it did. After a failure a picture is kept and the
+ * rest say at once that they were not reached.
+ */
+export function chapters(reader: () => Hand): (name: string, tell: () => Promise<void>) => void {
+  let broken: string | null = null;
+  return (name, tell) =>
+    test(name, async () => {
+      if (broken !== null) throw new Error(`not reached: "${broken}" failed`);
+      try {
+        await tell();
+      } catch (error) {
+        broken = name;
+        await reader()
+          .shoots('failed')
+          .catch(() => undefined);
+        throw error;
+      }
+    });
+}
