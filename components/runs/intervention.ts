@@ -64,6 +64,7 @@ const isSafe = (kind: Known['kind']): kind is SafeAct => kind !== 'resume';
 export function stagesOf(local: LocalIntervention, known: Known | null, state: RunState): Stages | null {
   if (local.kind === 'idle') return known && isSafe(known.kind) && isFresh(known, state) ? fromServer(known.kind, known, known.by) : null;
   if (known && known.kind === local.act && isAnswerTo(local, known)) return fromServer(local.act, known, null);
+  if (known && isOvertaken(local, known)) return stagesOf({ kind: 'idle' }, known, state);
   const pending = { act: local.act, by: null, controller: { state: 'waiting' as const, atMs: null } };
   switch (local.kind) {
     case 'sending':
@@ -127,6 +128,10 @@ function isAnswerTo(local: Exclude<LocalIntervention, { kind: 'idle' }>, known: 
   if (local.kind === 'sending') return serverAtMs >= local.tappedAtMs - 2000;
   return false;
 }
+
+/** Somebody has acted since: what this page asked for is done with, a resumed hold above all. */
+const isOvertaken = (local: LocalIntervention, known: Known): boolean =>
+  local.kind === 'accepted' && Date.parse(known.serverAt) > local.serverAtMs;
 
 /** What to say aloud at the newest stage. */
 export function spokenStage(stages: Stages, clock: (utcMs: number) => string): string {

@@ -1,0 +1,19 @@
+import { stagesOf } from '@/components/runs/intervention';
+
+const at = (second: number) => new Date(Date.UTC(2031, 0, 14, 22, 0, second)).toISOString();
+const accepted = { kind: 'accepted', act: 'hold', serverAtMs: Date.parse(at(10)) } as const;
+
+test('a hold that was resumed is no longer waited for', () => {
+  const resumed = { kind: 'resume', by: 'Ilse Marrowby', serverAt: at(30), confirmedAt: null } as const;
+  expect(stagesOf(accepted, resumed, 'running')).toBeNull();
+});
+
+test('a stop by somebody else takes the place of an own hold', () => {
+  const stopped = { kind: 'stop', by: 'Pim Oldershaw', serverAt: at(30), confirmedAt: null } as const;
+  expect(stagesOf(accepted, stopped, 'stopping')).toMatchObject({ act: 'stop', by: 'Pim Oldershaw', controller: { state: 'now' } });
+});
+
+test('until the server tells of it, an accepted hold waits for the controller', () => {
+  const before = { kind: 'resume', by: 'Ilse Marrowby', serverAt: at(5), confirmedAt: at(6) } as const;
+  expect(stagesOf(accepted, before, 'running')).toMatchObject({ act: 'hold', server: { state: 'done' }, controller: { state: 'now' } });
+});
