@@ -16,12 +16,11 @@ interface EditorFooterProps {
 
 /** Within the thumb's reach: the step in hand, a new step, rehearse, issue; start once the draft is issued. */
 export function EditorFooter({ protocol, status, onOpen }: EditorFooterProps) {
-  const { mayWrite, rig } = useEditor();
+  const { rig } = useEditor();
   const mayStart = useMay('run.start').ok;
   const router = useRouter();
   const issued = protocol.latestRevision !== null && !protocol.draftDiffers && status === 'saved';
   const start = () => router.push(`/rigs/${rig?.id ?? ''}/start?protocol=${protocol.id}&revision=${protocol.latestRevision ?? 1}` as Href);
-  if (!mayWrite) return null;
   return (
     <View className="gap-2 wide:flex-row-reverse wide:items-center wide:gap-6">
       <EditorToolbar />

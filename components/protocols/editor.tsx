@@ -58,7 +58,7 @@ export function Editor({ protocol, etag }: EditorProps) {
         asideOnlyWide
         footerGivesWay
         aside={<EditorAside {...details} />}
-        footer={<EditorFooter protocol={protocol} status={sync.state.status} onOpen={setSheet} />}
+        footer={mayWrite ? <EditorFooter protocol={protocol} status={sync.state.status} onOpen={setSheet} /> : undefined}
       >
         <EditorMain sync={sync} startAt={startAt} planning={planning} restored={begin.backup !== null} />
       </Screen>
