@@ -83,27 +83,40 @@ export class ConflictingSamplesError extends Error {
   }
 }
 
+/** The channel of that name is of another kind. */
+export class UnsuitableChannelError extends Error {
+  override readonly name = 'UnsuitableChannelError';
+  constructor(readonly channel: ChannelRecord) {
+    super('the channel is of another kind');
+  }
+}
+
 /**
- * Stores an import, all or nothing: `fill` hands over the batches and may throw, which leaves the channel as it was.
+ * Stores an import, all or nothing: `fill` hands over the batches and may throw, which leaves everything as it was, a
+ * channel that was not there included.
+ * @throws UnsuitableChannelError where the channel has another source or unit
  * @throws ConflictingSamplesError where an instant is known with another value
  */
 export function storeImport(
   connection: Connection,
-  work: { labId: string; importId: string; channelId: string; storedAt: number; mapping: z.infer<typeof importMappingSchema> },
+  work: { labId: string; importId: string; channel: WantedChannel; storedAt: number; mapping: z.infer<typeof importMappingSchema> },
   fill: (take: (batch: SampleBatch) => Promise<void>) => Promise<void>,
-): Promise<{ stored: number; known: number }> {
-  const { labId, importId, channelId, ...change } = work;
+): Promise<{ channel: ChannelRecord; stored: number; known: number }> {
+  const { labId, importId, channel: wanted, ...change } = work;
   return connection.bulk(async (client, handle) => {
-    const sum = { stored: 0, known: 0 };
     // Two who commit the same import: the second waits here and then finds it stored.
     await handle.select({ id: imports.id }).from(imports).where(and(eq(imports.labId, labId), eq(imports.id, importId))).for('update');
+    const channel = await findOrMakeChannel(handle, wanted);
+    if (channel.source !== wanted.source || channel.unit !== wanted.unit) throw new UnsuitableChannelError(channel);
+    const key = { labId, channelId: channel.id };
+    const sum = { channel, stored: 0, known: 0 };
     await fill(async (batch) => {
-      const { stored, known } = await appendSamples(client, { labId, channelId }, batch);
-      if (known > 0) await assertSameValues(client, { labId, channelId }, batch);
+      const { stored, known } = await appendSamples(client, key, batch);
+      if (known > 0) await assertSameValues(client, key, batch);
       sum.stored += stored;
       sum.known += known;
     });
-    await changeImport(handle, { labId, importId }, { ...change, state: 'stored', channelId });
+    await changeImport(handle, { labId, importId }, { ...change, state: 'stored', channelId: channel.id });
     return sum;
   });
 }

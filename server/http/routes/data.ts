@@ -59,15 +59,20 @@ function tooLarge(file: store.ImportRecord, services: Services): ProblemError {
   return new ProblemError('too-large', `${file.fileName} is larger than ${String(Math.round(services.config.limits.importBytes / 1_048_576))} MiB. Cut it into parts, or leave out columns that are not needed.`);
 }
 
-/** The channel the samples go to; one that is there already must be of the same kind. */
-async function channelFor(services: Services, run: RunRecord, wanted: { name: string; unit: string }): Promise<store.ChannelRecord> {
-  const channel = await store.findOrMakeChannel(services.database.db, {
-    labId: run.labId, rigId: run.rigId, runId: run.rehearsal ? run.id : null, name: wanted.name, unit: wanted.unit, quantity: wanted.unit.endsWith('rad') ? 'pendulum angle' : 'spot position', role: 'deflection', source: 'import',
-    createdAt: services.clock.utcMs(),
-  });
-  if (channel.source !== 'import') throw new ProblemError('already-exists', `The channel ${channel.name} is filled by the rig itself. Choose another name for the imported one.`, [{ path: 'channelName', message: `a name other than ${channel.name}` }]);
-  if (channel.unit !== wanted.unit) throw new ProblemError('already-exists', `The channel ${channel.name} is in ${channel.unit}, the file in ${wanted.unit}. Choose another name, or the unit ${channel.unit}.`, [{ path: 'channelName', message: `a name other than ${channel.name}` }]);
-  return channel;
+/** Why a file cannot go into the channel that was named. */
+function channelRefusal(channel: store.ChannelRecord, unit: string): ProblemError {
+  const item = [{ path: 'channelName', message: `a name other than ${channel.name}` }];
+  if (channel.source !== 'import') return new ProblemError('already-exists', `The channel ${channel.name} is filled by the rig itself. Choose another name for the imported one.`, item);
+  return new ProblemError('already-exists', `The channel ${channel.name} is in ${channel.unit}, the file in ${unit}. Choose another name, or the unit ${channel.unit}.`, item);
+}
+
+/** What the problems of a file say when it was to be stored. */
+function unreadable(file: store.ImportRecord, reading: Awaited<ReturnType<typeof readImport>>): ProblemError {
+  const items = reading.problems.map(({ row, column, message }) => ({ path: [row === null ? '' : `row ${String(row)}`, column ?? ''].filter((part) => part !== '').join(', '), message }));
+  const first = items[0];
+  const words = first === undefined ? '' : [first.path, first.message].filter((part) => part !== '').join(': ');
+  const count = reading.problemCount === 1 ? 'One problem' : `${String(reading.problemCount)} problems`;
+  return new ProblemError('unreadable-data', `Nothing was stored. ${count} in ${file.fileName}: ${words}.`, items);
 }
 
 export const dataRoutes = [
@@ -103,20 +108,22 @@ export const dataRoutes = [
     assertReceived(file);
     assertMapping(body.mapping);
     const run = await loadRun(services, file.labId, file.runId);
-    const channel = await channelFor(services, run, { name: body.channelName, unit: body.mapping.unit });
-    const work = { labId: file.labId, importId: file.id, channelId: channel.id, storedAt: services.clock.utcMs(), mapping: body.mapping };
+    const { channelName, mapping } = body;
+    const nowUtcMs = services.clock.utcMs();
+    const channel: store.WantedChannel = {
+      labId: run.labId, rigId: run.rigId, runId: run.rehearsal ? run.id : null, name: channelName, unit: mapping.unit, quantity: mapping.unit.endsWith('rad') ? 'pendulum angle' : 'spot position', role: 'deflection',
+      source: 'import', createdAt: nowUtcMs,
+    };
     try {
-      const { stored, known } = await store.storeImport(services.database, work, async (take) => {
-        const reading = await readImport(services, { file, run, mapping: body.mapping }, take);
-        if (reading.ok) return;
-        const items = reading.problems.map(({ row, column, message }) => ({ path: [row === null ? '' : `row ${String(row)}`, column ?? ''].filter((part) => part !== '').join(', '), message }));
-        const first = items[0];
-        throw new ProblemError('unreadable-data', `Nothing was stored: ${String(reading.problemCount)} problems in ${file.fileName}, the first: ${first === undefined ? '' : [first.path, first.message].filter((part) => part !== '').join(': ')}.`, items);
+      const done = await store.storeImport(services.database, { labId: file.labId, importId: file.id, channel, storedAt: nowUtcMs, mapping }, async (take) => {
+        const reading = await readImport(services, { file, run, mapping }, take);
+        if (!reading.ok) throw unreadable(file, reading);
       });
-      return { channel: channelViewOf(channel), stored, known };
+      return { ...done, channel: channelViewOf(done.channel) };
     } catch (error) {
+      if (error instanceof store.UnsuitableChannelError) throw channelRefusal(error.channel, mapping.unit);
       if (!(error instanceof store.ConflictingSamplesError)) throw error;
-      throw new ProblemError('already-exists', `Nothing was stored: the channel ${channel.name} holds another value at ${isoOf(error.atUtcMs)} already. Choose another channel name.`, [{ path: 'channelName', message: `a name other than ${channel.name}` }]);
+      throw new ProblemError('already-exists', `Nothing was stored: the channel ${channelName} holds another value at ${isoOf(error.atUtcMs)} already. Choose another channel name.`, [{ path: 'channelName', message: `a name other than ${channelName}` }]);
     }
   }),
 
