@@ -1,0 +1,75 @@
+import { demoIds } from '@/db/demo/seed';
+import { evaluationViewSchema } from '@/shared/contracts/evaluations';
+import { CODATA_2022_G } from '@/shared/physics/constants';
+import { databaseOfThisFile } from '@/tests/support/database';
+import { LabServer, quickProtocol } from '@/tests/support/lab-server';
+
+jest.setTimeout(120_000);
+
+const database = databaseOfThisFile();
+let lab: LabServer;
+beforeAll(async () => {
+  lab = await LabServer.start(database());
+}, 60_000);
+afterAll(() => lab.stop());
+
+const labPath = `/labs/${demoIds.lab}`;
+const ask = (runId: string, body: object = {}) => lab.as('analyst', 'POST', `${labPath}/runs/${runId}/evaluations`).send(body);
+const rehearse = async (body: object) => {
+  const asked = await lab.as('operator', 'POST', `${labPath}/rehearsals`).send({ rigId: demoIds.rig, protocolId: demoIds.shortProtocol, revision: 1, ...body }).expect(202);
+  await lab.services.idle();
+  await lab.advance(31_000);
+  return lab.view(asked.body.id as string);
+};
+
+test('a rehearsal of the short protocol is stored like a run, and its evaluation gives back the G it was made with', async () => {
+  const run = await rehearse({ seed: 3 });
+  expect(run).toMatchObject({ state: 'finished', rehearsal: true, protocolRevision: 1, dwellsDone: 12, dwellsPlanned: 12, simulated: { trueG: CODATA_2022_G.value, seed: 3 } });
+  const queued = await ask(run.id).expect(202);
+  expect(queued.body).toMatchObject({ state: 'queued', channel: 'deflection', createdBy: 'Tam Ferrowdale', result: null });
+  await lab.services.idle();
+  await lab.advance(31_000);
+  const { body } = await lab.as('viewer', 'GET', `${labPath}/evaluations/${queued.body.id as string}`).expect(200);
+  const done = evaluationViewSchema.parse(body);
+  expect(done).toMatchObject({ state: 'done', error: null, result: { registered: true, chain: { valid: true } } });
+  const { G, reversal_rad: reversal } = done.result ?? {};
+  // Eleven reversals between twelve alternating dwells; G within two of its own standard uncertainties of the simulator's.
+  expect(reversal?.count).toBe(11);
+  expect(Math.abs((G?.value ?? 0) - CODATA_2022_G.value)).toBeLessThan(2 * (G?.u ?? 0));
+  expect((G?.u ?? 1) / (G?.value ?? 1)).toBeLessThan(0.01);
+  expect(done.curves?.length).toBe(12);
+  const list = await lab.as('viewer', 'GET', `${labPath}/runs/${run.id}/evaluations`).expect(200);
+  expect(list.body.items).toHaveLength(1);
+  expect(list.body.items[0].curves).toBeUndefined();
+});
+
+test('a run whose data cannot give a result says why', async () => {
+  const protocolId = await lab.issue({ formatVersion: 1, name: 'Still', steps: [{ kind: 'home' }, { kind: 'settle', for_s: 60 }] });
+  const run = await rehearse({ protocolId });
+  const queued = await ask(run.id).expect(202);
+  await lab.services.idle();
+  await lab.advance(31_000);
+  const { body } = await lab.as('viewer', 'GET', `${labPath}/evaluations/${queued.body.id as string}`);
+  if (body.state === 'failed') expect(body.error).toMatch(/\w+ \w+ \w+/);
+  else expect(body.result.G).toBeNull();
+});
+
+test('a run that has not ended, a channel without data, a run without deflection', async () => {
+  const runId = await lab.run(quickProtocol());
+  expect((await ask(runId).expect(409)).body.detail).toMatch(/^The run is (starting|running)\. Wait for its end, or stop it\.$/);
+  await lab.until(runId, 'finished');
+  expect((await ask(runId, { channel: 'spot' }).expect(422)).body).toMatchObject({ code: 'cannot-evaluate', detail: 'The channel "spot" has no deflection within this run; these have: deflection.' });
+  await lab.services.idle();
+  await database().connection.pool.query('delete from samples');
+  expect((await ask(runId).expect(422)).body.detail).toBe('No deflection lies within this run. Bring the file of the readout in first.');
+});
+
+test('a rehearsal of a draft, and one that is refused', async () => {
+  const made = await lab.as('operator', 'POST', `${labPath}/protocols`).send({ document: quickProtocol() }).expect(201);
+  const run = await rehearse({ protocolId: made.body.id, revision: undefined });
+  expect(run).toMatchObject({ state: 'finished', protocolRevision: 0 });
+  expect((await lab.as('viewer', 'GET', `${labPath}/rigs/${demoIds.rig}`)).body.activeRun).toBeNull();
+  const lost = await lab.as('operator', 'POST', `${labPath}/protocols`).send({ document: quickProtocol({ steps: [{ kind: 'swing', to: 'nowhere' }] }) }).expect(201);
+  await lab.as('operator', 'POST', `${labPath}/rehearsals`).send({ rigId: demoIds.rig, protocolId: lost.body.id }).expect(422);
+  expect((await lab.intervene(run.id, 'hold').expect(409)).body.detail).toContain('A rehearsal runs by itself');
+});
