@@ -11,6 +11,8 @@ module.exports = {
   content: ['./app/**/*.{ts,tsx}', './components/**/*.{ts,tsx}'],
   presets: [require('nativewind/preset')],
   darkMode: 'class',
+  // A tap leaves a hover behind on a phone, and the last pressed button would look chosen.
+  future: { hoverOnlyWhenSupported: true },
   theme: {
     extend: {
       colors,
