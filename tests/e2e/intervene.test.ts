@@ -124,6 +124,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.keeps('resume-confirm');
     await hand.at('resume-sheet').waitFor({ state: 'detached' });
     await hand.reads('run-state', /Swing|Dwell/);
+    await hand.at('intervention-stages').waitFor({ state: 'detached' });
   });
 
   chapter('without a network stop stays, says so, tries again by itself and acts once', async () => {
@@ -143,6 +144,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.at('result-screen').waitFor();
     await hand.reads('headline', /Stopped at \d\d:\d\d/);
     expect(await eventsOf(runId, 'stop-requested')).toHaveLength(1);
+    await hand.reads('figures', /^2 of 8/);
     await hand.shoots('stopped');
   });
 

@@ -16,6 +16,13 @@ const webDir = join(__dirname, '../../../dist');
 /** How often virtual time is made to follow the clock on the wall, ms. */
 const tickMs = 100;
 
+interface LabParts {
+  address: string;
+  database: TestDatabase;
+  mailbox: DemoMailbox;
+  closeMail(): void;
+}
+
 /**
  * The demo lab as people meet it: the whole server behind a port on loopback, a mail server, browsers. Its time follows
  * the clock on the wall, so that pages are alive, and jumps when a test lets time pass.
@@ -27,12 +34,13 @@ export class Lab {
   private tickedMs = performance.now();
 
   private constructor(
-    readonly address: string,
     readonly server: LabServer,
-    private readonly database: TestDatabase,
-    private readonly mailbox: DemoMailbox,
-    private readonly closeMail: () => void,
+    private readonly parts: LabParts,
   ) {}
+
+  get address(): string {
+    return this.parts.address;
+  }
 
   static async start(): Promise<Lab> {
     const database = await freshDatabase();
@@ -42,7 +50,7 @@ export class Lab {
     const mailbox = await startDemoMailbox({ folder: mkdtempSync(join(tmpdir(), 'evenfall-mail-')), clock: world.clock });
     const mail = createSmtpMail({ url: mailbox.url, from: 'Evenfall <evenfall@quillfen.example>' });
     const server = await LabServer.start(database, { world, config: { webDir }, overrides: { mail } });
-    const lab = new Lab(await server.built.listen(), server, database, mailbox, () => mail.close());
+    const lab = new Lab(server, { address: await server.built.listen(), database, mailbox, closeMail: () => mail.close() });
     lab.letTimeFlow();
     return lab;
   }
@@ -88,11 +96,11 @@ export class Lab {
 
   /** The newest mail to an address, or null. */
   async mailTo(address: string): Promise<ParsedMail | null> {
-    const name = readdirSync(this.mailbox.folder)
+    const name = readdirSync(this.parts.mailbox.folder)
       .filter((file) => file.endsWith(`${address}.eml`))
       .sort()
       .at(-1);
-    return name === undefined ? null : simpleParser(readFileSync(join(this.mailbox.folder, name)));
+    return name === undefined ? null : simpleParser(readFileSync(join(this.parts.mailbox.folder, name)));
   }
 
   async close(browser: Browser): Promise<void> {
@@ -105,10 +113,10 @@ export class Lab {
     await this.turn;
     for (const browser of this.browsers) await this.close(browser);
     await this.server.stop();
-    this.closeMail();
-    await this.mailbox.close();
-    rmSync(this.mailbox.folder, { recursive: true, force: true });
-    await this.database.drop();
+    this.parts.closeMail();
+    await this.parts.mailbox.close();
+    rmSync(this.parts.mailbox.folder, { recursive: true, force: true });
+    await this.parts.database.drop();
   }
 
   private async shiftDevices(ms: number): Promise<void> {
