@@ -48,6 +48,8 @@ const IMPOSSIBLE_DELAY_MS = -0.15;
 const PRIOR_SLOPE = 1e-4;
 /** Least scatter of one offset: interrupt latency and the resolution of the stamps. */
 const LEAST_SCATTER_MS = 0.01;
+/** The offset of one exchange lies anywhere within ± delay / 2 (RFC 5905): a rectangle of that width has the standard uncertainty delay / √12. */
+const RECTANGLE = Math.sqrt(12);
 const UNKNOWN: Estimate = { ms: 0, uMs: 1000 };
 
 export class ClockModel {
@@ -121,7 +123,7 @@ export class ClockModel {
 /** Weighted least squares with a weak prior of zero slope; an exchange slower than the fastest counts less. */
 function fit(samples: readonly Sample[]): Line {
   const least = Math.max(0, Math.min(...samples.map(({ delayMs }) => delayMs)));
-  const weights = samples.map(({ delayMs }) => 1 / (LEAST_SCATTER_MS + Math.max(0, delayMs - least) / 2) ** 2);
+  const weights = samples.map(({ delayMs }) => 1 / (LEAST_SCATTER_MS + Math.max(0, delayMs - least) / RECTANGLE) ** 2);
   const sum = (of: (sample: Sample, index: number) => number) => samples.reduce((total, sample, index) => total + of(sample, index), 0);
   const weight = sum((_, index) => weights[index] as number);
   const centreMs = sum(({ atMs }, index) => (weights[index] as number) * atMs) / weight;
@@ -139,6 +141,6 @@ function fit(samples: readonly Sample[]): Line {
     slope,
     varOffset: scale / weight,
     varSlope: scale / stiffness,
-    uAsymmetryMs: Math.hypot(least / (2 * Math.sqrt(3)), LEAST_SCATTER_MS),
+    uAsymmetryMs: Math.hypot(least / RECTANGLE, LEAST_SCATTER_MS),
   };
 }
