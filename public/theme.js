@@ -7,8 +7,7 @@
     chosen = null;
   }
   var known = { dark: '#0b0f15', light: '#f5f2ea', red: '#070000' };
-  var light = window.matchMedia && window.matchMedia('(prefers-color-scheme: light)').matches;
-  var name = chosen && known[chosen] ? chosen : light ? 'light' : 'dark';
+  var name = chosen && known[chosen] ? chosen : 'dark';
   document.documentElement.className = 'theme-' + name;
   var meta = document.querySelector('meta[name="theme-color"]');
   if (meta) meta.setAttribute('content', known[name]);

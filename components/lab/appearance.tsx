@@ -12,7 +12,7 @@ const choices: readonly { name: ThemeName; label: string; use: string }[] = [
 export function Appearance() {
   const { name, chosen, choose } = useTheme();
   return (
-    <Section title="Appearance" remark={chosen ? 'Kept on this device.' : 'Follows the system until you choose; kept on this device.'}>
+    <Section title="Appearance" remark={chosen ? 'Kept on this device.' : 'Dark until you choose; kept on this device.'}>
       <View role="radiogroup" aria-label="Theme" className="flex-row flex-wrap gap-3">
         {choices.map((choice) => (
           <Pressable

@@ -1,12 +1,12 @@
 import { createContext, useContext, useEffect, useMemo, useState, type ReactNode } from 'react';
-import { readChosenTheme, showTheme, storeChosenTheme, systemTheme } from './theme-storage';
+import { readChosenTheme, showTheme, storeChosenTheme, usualTheme } from './theme-storage';
 import { themes, type ThemeColors, type ThemeName } from './tokens';
 
 interface Theme {
   name: ThemeName;
   /** Hex strings of the present theme, for SVG and canvas. */
   colors: ThemeColors;
-  /** Whether the theme was chosen on this device; else it follows the system. */
+  /** Whether the theme was chosen on this device. */
   chosen: boolean;
   choose: (name: ThemeName) => void;
 }
@@ -16,18 +16,10 @@ const ThemeContext = createContext<Theme>({ name: 'dark', colors: themes.dark, c
 /** The present theme and the way to choose another. */
 export const useTheme = (): Theme => useContext(ThemeContext);
 
-/** Holds the theme of this device: the chosen one, else the system's, followed while the page is open. */
+/** Holds the theme of this device: the chosen one, else dark. */
 export function ThemeProvider({ children }: { children: ReactNode }) {
   const [chosen, setChosen] = useState<ThemeName | null>(readChosenTheme);
-  const [system, setSystem] = useState<ThemeName>(systemTheme);
-  const name = chosen ?? system;
-
-  useEffect(() => {
-    const query = window.matchMedia?.('(prefers-color-scheme: light)');
-    const follow = () => setSystem(systemTheme());
-    query?.addEventListener?.('change', follow);
-    return () => query?.removeEventListener?.('change', follow);
-  }, []);
+  const name = chosen ?? usualTheme;
 
   useEffect(() => showTheme(name, themes[name].ink), [name]);
 

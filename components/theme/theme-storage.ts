@@ -24,10 +24,8 @@ export function storeChosenTheme(name: ThemeName): void {
   }
 }
 
-/** Until somebody chooses: light where the system asks for light, else dark. */
-export function systemTheme(): ThemeName {
-  return typeof window !== 'undefined' && window.matchMedia?.('(prefers-color-scheme: light)').matches ? 'light' : 'dark';
-}
+/** Until somebody chooses: the room is dark, so a light page is never shown unasked. */
+export const usualTheme: ThemeName = 'dark';
 
 /** Puts the theme on the page: the class that carries the variables, and the colour of the browser's own bars. */
 export function showTheme(name: ThemeName, ground: string): void {
