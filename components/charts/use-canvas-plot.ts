@@ -1,7 +1,7 @@
 import { useEffect, useMemo, useRef, type RefObject } from 'react';
 import UPlot from 'uplot';
 import type { ThemeColors } from '@/components/theme';
-import { unitSign } from '@/shared/lib/format-number';
+import { MINUS, unitSign } from '@/shared/lib/format-number';
 import { formatClock } from '@/shared/lib/format-time';
 import { gapOf } from './curve';
 import { panned, zoomed, type StepBand, type TimeSpan } from './deflection-plot-types';
@@ -121,7 +121,7 @@ function optionsOf(latest: RefObject<CanvasPlotInput>, width: number): UPlot.Opt
         label: scaleOf.sign,
         labelFont: font('Atkinson Hyperlegible Next'),
         labelSize: 20,
-        values: (_, ticks) => ticks.map((y) => String(Number((y * scaleOf.factor).toPrecision(6)))),
+        values: (_, ticks) => ticks.map((y) => String(Number((y * scaleOf.factor).toPrecision(6))).replace('-', MINUS)),
       },
     ],
     hooks: {

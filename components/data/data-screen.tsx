@@ -10,7 +10,7 @@ import { useCalm } from '@/components/runs/use-now';
 import { Button, Empty, Label, Loading, Panel, ProblemNotice, Screen, Select, useWide } from '@/components/ui';
 import { readSamples } from '@/shared/contracts/data';
 import { listSteps, type StepRowView } from '@/shared/contracts/runs';
-import { formatFixed } from '@/shared/lib/format-number';
+import { formatFixed, unitSign } from '@/shared/lib/format-number';
 
 const points = 3000;
 
@@ -58,7 +58,7 @@ export function DataScreen() {
               <Select
                 label="Channel"
                 value={channelId}
-                options={channels.map(({ id, name, unit }) => ({ value: id, label: `${name}, ${unit}` }))}
+                options={channels.map(({ id, name, unit }) => ({ value: id, label: `${name}, ${unitSign(unit)}` }))}
                 onChange={setChosen}
                 testID="channel"
               />

@@ -19,7 +19,7 @@ export function Icon({ name, size = 20, tone = 'text', label }: IconProps) {
   const shape = iconShapes[name];
   const accessible = label === undefined ? ({ 'aria-hidden': true } as const) : ({ role: 'img', 'aria-label': label } as const);
   return (
-    <Svg width={size} height={size} viewBox="0 0 24 24" fill="none" {...accessible}>
+    <Svg width={size} height={size} viewBox="0 0 24 24" fill="none" style={{ flexShrink: 0 }} {...accessible}>
       {shape.lines?.map((d) => (
         <Path key={d} d={d} stroke={color} strokeWidth={1.8} strokeLinecap="round" strokeLinejoin="round" />
       ))}
