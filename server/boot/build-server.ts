@@ -77,6 +77,7 @@ class Life {
       services.activeRuns.remove(start.runId);
       services.log.error({ runId: start.runId, rigId: start.rigId }, why);
     }
+    inside.tellTakenUp();
     this.refreshRegularly();
     inside.crew.start();
     if (this.parts.overrides?.ticks ?? services.config.mode !== 'test') this.ticks = startTicks([{ name: 'keep house', cron: '7 * * * *', work: () => keepHouse(db, services.clock.utcMs()) }], services.log);

@@ -62,6 +62,8 @@ export interface Inside {
   stations: ServerRigStations;
   crew: JobCrew;
   background: Background;
+  /** Unfinished runs are driven from now on. */
+  tellTakenUp(): void;
   closeTasks(): Promise<void>;
 }
 
@@ -78,7 +80,7 @@ export function buildServices({ database, clock, config, overrides = {} }: Build
   const samples = createSampleStore(database);
   const sessions = createSessions({ db: database.db, clock, newToken, sha256: sha256Hex });
   const arms = new MemoryArmKeeper({ database, clock, log, sha256: sha256Hex, background: (work, what) => background.add(work, what) });
-  const leases: LeaseKeeper = new LeaseKeeper({ database, clock, log, holder: randomUUID(), onLost: () => letGo() });
+  const leases: LeaseKeeper = new LeaseKeeper({ database, clock, log, holder: randomUUID(), leaseMs: Math.max(5_000, overrides.paceMs ?? 0), onLost: () => letGo() });
   const stations: ServerRigStations = new ServerRigStations({
     database, samples, clock, log, paceMs: overrides.paceMs ?? 0, epochOf: (rig) => leases.epochOf(rig), apparatusOf: apparatusMaker({ clock, config, overrides }), onLinkEvent: (station, event) => heedLink(station, event),
   });
@@ -94,6 +96,7 @@ export function buildServices({ database, clock, config, overrides = {} }: Build
   const live = new LiveHub({ source: liveSourceOf(() => services), clock, streamsPerUser: config.limits.streamsPerUser });
   const access = new AccessDirectory({ source: accessSource(database.db, nowUtcMs), sessions, clock, sha256: sha256Hex });
   const workers = overrides.tasks === undefined ? createWorkerTasks() : null;
+  let tellTakenUp: () => void = () => undefined;
   const services: Services = {
     config: { ...config, limits: { ...config.limits } }, clock, log, database, sessions, access, samples, stations, arms, supervisor, live,
     newId: randomUUID, newToken, sha256: sha256Hex,
@@ -102,6 +105,9 @@ export function buildServices({ database, clock, config, overrides = {} }: Build
     activeRuns: new ActiveRuns({ supervisor, live }),
     tasks: overrides.tasks ?? (workers as HeavyTasks),
     background: (work, what) => background.add(work, what),
+    takenUp: new Promise((resolve) => {
+      tellTakenUp = resolve;
+    }),
     breathe: () => new Promise((resolve) => setImmediate(resolve)),
     pokeJobs: () => crew.poke(),
   };
@@ -129,7 +135,7 @@ export function buildServices({ database, clock, config, overrides = {} }: Build
     if (why !== null) arms.end(station, why, engineItself);
   }
 
-  return { services, inside: { leases, arms, stations, crew, background, closeTasks: async () => workers?.close() } };
+  return { services, inside: { leases, arms, stations, crew, background, tellTakenUp: () => tellTakenUp(), closeTasks: async () => workers?.close() } };
 }
 
 function endOfArm(event: LinkEvent): string | null {

@@ -9,6 +9,8 @@ export interface LeaseParts {
   log: Logger;
   /** Name of this process. */
   holder: string;
+  /** A crashed server's rigs are free again after this, ms. */
+  leaseMs: number;
   /** Another process has taken a rig over: this one must let go of it at once. */
   onLost(rig: RigKey): void;
 }
@@ -18,10 +20,9 @@ interface RigKey {
   rigId: string;
 }
 
-/** A crashed server's rigs are free again after this. */
-const leaseMs = 15_000;
-const renewMs = 5_000;
-const retryMs = 1_000;
+/** So often within its length a lease is renewed. */
+const renewals = 3;
+const retryMs = 500;
 
 /** Leases of the rigs that this process drives: no rig has two drivers. */
 export class LeaseKeeper {
@@ -49,7 +50,7 @@ export class LeaseKeeper {
   }
 
   renewRegularly(): void {
-    this.cancel = this.parts.clock.after(renewMs, () => {
+    this.cancel = this.parts.clock.after(this.parts.leaseMs / renewals, () => {
       void this.renewAll().then(() => {
         if (!this.closed) this.renewRegularly();
       });
@@ -66,7 +67,7 @@ export class LeaseKeeper {
   }
 
   private async tryTake(rig: RigKey): Promise<boolean> {
-    const { database, clock, holder } = this.parts;
+    const { database, clock, holder, leaseMs } = this.parts;
     const nowUtcMs = clock.utcMs();
     const epoch = await takeRigLease(database.db, { ...rig, holder, nowUtcMs, untilUtcMs: nowUtcMs + leaseMs });
     if (epoch === null) return false;

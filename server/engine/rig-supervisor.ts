@@ -126,6 +126,11 @@ export class RigSupervisor {
     this.quarantine.delete(rigId);
   }
 
+  /** Frees a rig from a run that cannot be taken up, after somebody has looked at it and ended the run. */
+  release(rigId: string): void {
+    this.quarantine.delete(rigId);
+  }
+
   onChange(listener: SupervisorListener): () => void {
     this.listeners.add(listener);
     return () => this.listeners.delete(listener);

@@ -39,6 +39,8 @@ export interface Services {
   tasks: HeavyTasks;
   /** Lets something go on after the answer; a failure is logged, and `idle` waits for it. */
   background(work: Promise<unknown>, what: string): void;
+  /** Resolves when this server has taken up the runs that another left unfinished. */
+  takenUp: Promise<void>;
   /** Lets everything else have a turn: long work calls it between its parts, so that hold and stop never wait for it. */
   breathe(): Promise<void>;
   /** Tells the workers that a job was queued, so that it need not wait for their next look. */

@@ -64,15 +64,30 @@ const startRoutes = [
   }),
 ];
 
+const longestWaitMs = 20_000;
+
+/** Waits until a server that has just started drives the runs it found; at most 20 s. */
+async function waitTakenUp({ takenUp, clock }: Services): Promise<void> {
+  let cancel = () => undefined as void;
+  const longest = new Promise<void>((resolve) => {
+    cancel = clock.after(longestWaitMs, resolve);
+  });
+  await Promise.race([takenUp, longest]);
+  cancel();
+}
+
 /** The driver of a run; for one that is over, or that nobody drives, the reason why nothing can be done with it. */
 async function driverOf(services: Services, labId: string, runId: string): Promise<RunDriver> {
-  const found = services.activeRuns.find(labId, runId);
-  if (found !== null) return found.driver;
+  const atOnce = services.activeRuns.find(labId, runId);
+  if (atOnce !== null) return atOnce.driver;
   const run = await load(services, labId, runId);
   if (run.rehearsal) throw new ProblemError('not-possible-now', 'A rehearsal runs by itself in fast time; nobody can step in.');
-  const blocked = services.supervisor.quarantinedOf(run.rigId);
-  if (blocked !== null && blocked.start.runId === runId) throw new ProblemError('not-possible-now', `${blocked.why} Use the switch at the rig if anything moves.`);
-  throw new ProblemError('not-possible-now', `The run is over: it ${run.state === 'failed' ? 'failed' : `was ${run.state}`}.`);
+  if (['finished', 'stopped', 'failed'].includes(run.state)) throw new ProblemError('not-possible-now', `The run is over: it ${run.state === 'failed' ? 'failed' : run.state === 'stopped' ? 'was stopped' : 'has finished'}.`);
+  await waitTakenUp(services);
+  const later = services.activeRuns.find(labId, runId);
+  if (later !== null) return later.driver;
+  const why = services.supervisor.quarantinedOf(run.rigId)?.why ?? 'No server drives this run at the moment, so nothing keeps the turntable moving: its motion lease lapses within 2 s.';
+  throw new ProblemError('not-possible-now', `${why} Use the switch at the rig if anything moves.`);
 }
 
 /** Enters what a person did into the audit chain when the database can be reached; the act itself does not wait for it. */
@@ -118,12 +133,24 @@ const interventionRoutes = [
     if (found === null) {
       const run = await load(services, membership.labId, params.runId);
       if (run.state === 'stopped') return { runId: run.id, serverAt: isoOf(services.clock.utcMs()) };
+      if (services.supervisor.quarantinedOf(run.rigId)?.start.runId === run.id) return endQuarantined(context, run);
     }
     const answer = (await driverOf(services, membership.labId, params.runId)).stop(me.name);
     auditLater(context, 'run.stop-asked', params.runId);
     return accepted(params.runId, answer);
   }),
 ];
+
+/** Ends a run that this version cannot drive: nothing moves, and the rig is free again. */
+async function endQuarantined(caller: Caller, run: store.RunRecord): Promise<{ runId: string; serverAt: string }> {
+  const { services, me } = caller;
+  const nowUtcMs = services.clock.utcMs();
+  const why = services.supervisor.quarantinedOf(run.rigId)?.why ?? '';
+  await store.markRunFailed(services.database.db, run, { why: `${why} Ended by ${me.name}.`, nowUtcMs });
+  services.supervisor.release(run.rigId);
+  auditLater(caller, 'run.stop-asked', run.id);
+  return { runId: run.id, serverAt: isoOf(nowUtcMs) };
+}
 
 /** A name that says what the file is, with nothing in it that a file system or a header could misread. */
 function attach(res: Response, run: store.RunRecord, ending: string): void {

@@ -70,6 +70,24 @@ describe.each(['dwell', 'swing'] as const)('a restart of the server in a %s', (k
   });
 });
 
+test('a run saved by another version of the engine is left alone, blocks its rig, and is ended by whoever looked at it', async () => {
+  const runId = await lab.run(quickProtocol({ name: 'From another version' }));
+  await lab.advance(3_600_000, () => kindOf(runId) === 'dwell');
+  await lab.intervene(runId, 'hold').expect(202);
+  await lab.until(runId, 'held');
+  await lab.services.idle();
+  await database().connection.pool.query('update runs set chart_version = 99 where id = $1', [runId]);
+  await restart(1_000);
+  expect(await lab.view(runId)).toMatchObject({ state: 'held', reason: expect.stringContaining('another version of the run engine (99'), mayResume: { ok: false } });
+  expect((await lab.intervene(runId, 'resume').expect(409)).body.detail).toContain('Look at the rig');
+  const protocolId = await lab.issue(quickProtocol());
+  await lab.arm();
+  expect((await lab.askStart(protocolId).expect(409)).body.code).toBe('rig-busy');
+  await lab.intervene(runId, 'stop', { who: 'keeper' }).expect(202);
+  expect(await lab.view(runId)).toMatchObject({ state: 'failed', reason: expect.stringContaining('Ended by Casimir Thornquist') });
+  await lab.askStart(protocolId).expect(201);
+});
+
 test('an arm that was ended stays ended over a restart, one that stands goes on standing', async () => {
   await lab.arm();
   await restart(1_000);

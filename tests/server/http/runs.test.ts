@@ -218,7 +218,7 @@ describe('hold and stop', () => {
       Object.assign(pool, working);
       await lab.advance(10_000);
     });
-    expect((await lab.view(runId)).state).toBe('stopped');
+    expect((await lab.until(runId, 'stopped')).intervention).toMatchObject({ kind: 'stop', by: 'Pim Oldershaw', confirmedAt: expect.any(String) });
   });
 
   test('of a session that ended are refused', async () => {
