@@ -37,30 +37,62 @@ const dayMs = 86_400_000;
  * Reads a whole CSV as a stream: every problem by row and column, good rows to `take` in batches in their order.
  * Memory stays flat whatever the size.
  */
-export async function readCsv(chunks: AsyncIterable<Uint8Array>, options: { mapping: ImportMapping; limits: CsvLimits; take?: (batch: SampleBatch) => Promise<void> }): Promise<CsvReading> {
+export async function readCsv(
+  chunks: AsyncIterable<Uint8Array>,
+  options: { mapping: ImportMapping; limits: CsvLimits; take?: (batch: SampleBatch) => Promise<void> },
+): Promise<CsvReading> {
   const reader = new RowReader(options.mapping, options.limits);
+  const handover = new Handover(options.take ?? (async () => undefined));
   const parser = Readable.from(chunks).pipe(
-    parse({ bom: true, delimiter: options.mapping.delimiter, relax_column_count: true, relax_quotes: true, skip_empty_lines: true, comment: '#', comment_no_infix: true, trim: true, info: true, max_record_size: 1_000_000 }),
+    parse({
+      bom: true,
+      delimiter: options.mapping.delimiter,
+      relax_column_count: true,
+      relax_quotes: true,
+      skip_empty_lines: true,
+      comment: '#',
+      comment_no_infix: true,
+      trim: true,
+      info: true,
+      max_record_size: 1_000_000,
+    }),
   );
   try {
     for await (const item of parser) {
       const { record, info } = item as { record: string[]; info: { lines: number } };
       reader.row(record, info.lines);
-      if (reader.pending >= batchSize) await flush(reader, options.take);
+      if (reader.pending >= batchSize) await handover.give(reader.batch());
     }
-    await flush(reader, options.take);
+    await handover.give(reader.batch());
+    await handover.end();
   } catch (error) {
     if (!(error instanceof CsvError)) throw error;
     reader.broken(error);
   } finally {
     parser.destroy();
+    await handover.end().catch(() => undefined);
   }
   return reader.result();
 }
 
-async function flush(reader: RowReader, take: ((batch: SampleBatch) => Promise<void>) | undefined): Promise<void> {
-  const batch = reader.batch();
-  if (take !== undefined && batch.utcMs.length > 0) await take(batch);
+/** Hands batches over one after another; while one is being taken the next is read. */
+class Handover {
+  private underWay: Promise<void> = Promise.resolve();
+
+  constructor(private readonly take: (batch: SampleBatch) => Promise<void>) {}
+
+  /** @throws what the taking of the batch before was rejected with */
+  async give(batch: SampleBatch): Promise<void> {
+    await this.end();
+    if (batch.utcMs.length === 0) return;
+    this.underWay = this.take(batch);
+    // Whoever waits for it next is told; until then a rejection must not count as nobody's.
+    this.underWay.catch(() => undefined);
+  }
+
+  async end(): Promise<void> {
+    await this.underWay;
+  }
 }
 
 class RowReader {
@@ -88,7 +120,12 @@ class RowReader {
       this.headerDone = true;
       this.names = record;
       const missing = [this.mapping.timeColumn, this.mapping.valueColumn].filter((index) => index >= record.length);
-      if (missing.length > 0) this.problem(line, null, `the mapping names column ${missing.map((index) => String(index + 1)).join(' and ')}, but the file has ${String(record.length)} columns: ${record.join(', ')}`);
+      if (missing.length > 0)
+        this.problem(
+          line,
+          null,
+          `the mapping names column ${missing.map((index) => String(index + 1)).join(' and ')}, but the file has ${String(record.length)} columns: ${record.join(', ')}`,
+        );
       return;
     }
     this.rows += 1;
@@ -110,9 +147,11 @@ class RowReader {
   private time(field: string | undefined): number {
     const utcMs = readTime(field, this.mapping);
     const last = this.lastUtcMs;
-    if (utcMs > this.limits.nowUtcMs + dayMs) throw new UnreadableField(`the time ${iso(utcMs)} lies in the future: are time format and zone of the mapping right?`);
+    if (utcMs > this.limits.nowUtcMs + dayMs)
+      throw new UnreadableField(`the time ${iso(utcMs)} lies in the future: are time format and zone of the mapping right?`);
     if (last !== null && utcMs === last) throw new UnreadableField(`the time ${iso(utcMs)} comes twice; each instant may have one value`);
-    if (last !== null && utcMs < last) throw new UnreadableField(`the time goes back from ${iso(last)} to ${iso(utcMs)}; rows must be in order of time`);
+    if (last !== null && utcMs < last)
+      throw new UnreadableField(`the time goes back from ${iso(last)} to ${iso(utcMs)}; rows must be in order of time`);
     return utcMs;
   }
 
@@ -120,7 +159,9 @@ class RowReader {
     const value = readNumber(field, this.mapping.decimal, 'value');
     const { greatestSpan } = this.limits;
     if (greatestSpan !== null && this.first !== null && Math.abs(value - this.first.value) > greatestSpan)
-      throw new UnreadableField(`the value ${String(value)} ${this.mapping.unit} lies ${String(Number(Math.abs(value - this.first.value).toPrecision(3)))} ${this.mapping.unit} from the first one, and the pendulum can move ${String(Number(greatestSpan.toPrecision(3)))} ${this.mapping.unit} at most: is the unit right?`);
+      throw new UnreadableField(
+        `the value ${String(value)} ${this.mapping.unit} lies ${String(Number(Math.abs(value - this.first.value).toPrecision(3)))} ${this.mapping.unit} from the first one, and the pendulum can move ${String(Number(greatestSpan.toPrecision(3)))} ${this.mapping.unit} at most: is the unit right?`,
+      );
     return value;
   }
 
@@ -146,7 +187,12 @@ class RowReader {
 
   broken(error: CsvError): void {
     const line = typeof error.lines === 'number' ? error.lines : null;
-    const message = error.code === 'CSV_QUOTE_NOT_CLOSED' ? 'a quotation mark is opened and never closed' : error.code === 'CSV_MAX_RECORD_SIZE' ? 'a row is longer than a million characters: is the delimiter right?' : 'the row cannot be parted into columns';
+    const message =
+      error.code === 'CSV_QUOTE_NOT_CLOSED'
+        ? 'a quotation mark is opened and never closed'
+        : error.code === 'CSV_MAX_RECORD_SIZE'
+          ? 'a row is longer than a million characters: is the delimiter right?'
+          : 'the row cannot be parted into columns';
     this.problem(line, null, message);
   }
 
@@ -160,7 +206,14 @@ class RowReader {
     if (this.rows === 0) this.problem(null, null, 'there is no row of data in the file');
     const sorted = [...this.intervalsMs].sort((a, b) => a - b);
     const median = sorted[Math.floor(sorted.length / 2)];
-    return { rows: this.rows, firstUtcMs: this.first?.utcMs ?? null, lastUtcMs: this.lastUtcMs, medianIntervalS: median === undefined ? null : median / 1000, problems: this.problems, problemCount: this.problemCount };
+    return {
+      rows: this.rows,
+      firstUtcMs: this.first?.utcMs ?? null,
+      lastUtcMs: this.lastUtcMs,
+      medianIntervalS: median === undefined ? null : median / 1000,
+      problems: this.problems,
+      problemCount: this.problemCount,
+    };
   }
 }
 
