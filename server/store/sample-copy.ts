@@ -11,28 +11,43 @@ const signature = Buffer.from('PGCOPY\n\xff\r\n\0', 'latin1');
 const headerBytes = signature.length + 8;
 /** Field count (2), then length (4) and content (8) of each of two fields. */
 const rowBytes = 26;
+const keyBytes = 16;
 const rowsAPiece = 8192;
 const postgresEpochUs = 946_684_800_000_000;
 
 export const microsecondsOf = (utcMs: number): number => Math.round(utcMs * 1000);
 
-/** Pieces of the COPY stream of a batch. */
-export function* encodeSamples({ utcMs, value }: SampleBatch): Generator<Buffer> {
+/** Pieces of the COPY stream of a batch; `keys` are UUIDs that every row begins with. */
+export function* encodeSamples({ utcMs, value }: SampleBatch, keys: readonly string[] = []): Generator<Buffer> {
   yield Buffer.concat([signature, Buffer.alloc(8)]);
+  const head = rowHead(keys);
+  const wholeBytes = head.length + rowBytes - 2;
   for (let from = 0; from < utcMs.length; from += rowsAPiece) {
     const count = Math.min(rowsAPiece, utcMs.length - from);
-    const piece = Buffer.alloc(count * rowBytes);
+    const piece = Buffer.alloc(count * wholeBytes);
     for (let row = 0; row < count; row += 1) {
-      const at = row * rowBytes;
-      piece.writeInt16BE(2, at);
-      piece.writeInt32BE(8, at + 2);
-      writeInt64(piece, microsecondsOf(utcMs[from + row] as number) - postgresEpochUs, at + 6);
-      piece.writeInt32BE(8, at + 14);
-      piece.writeDoubleBE(value[from + row] as number, at + 18);
+      piece.set(head, row * wholeBytes);
+      const at = row * wholeBytes + head.length;
+      piece.writeInt32BE(8, at);
+      writeInt64(piece, microsecondsOf(utcMs[from + row] as number) - postgresEpochUs, at + 4);
+      piece.writeInt32BE(8, at + 12);
+      piece.writeDoubleBE(value[from + row] as number, at + 16);
     }
     yield piece;
   }
   yield Buffer.from([0xff, 0xff]);
+}
+
+/** Field count and key fields. */
+function rowHead(keys: readonly string[]): Buffer {
+  const head = Buffer.alloc(2 + keys.length * (4 + keyBytes));
+  head.writeInt16BE(keys.length + 2, 0);
+  for (const [index, key] of keys.entries()) {
+    const at = 2 + index * (4 + keyBytes);
+    head.writeInt32BE(keyBytes, at);
+    head.write(key.replaceAll('-', ''), at + 4, 'hex');
+  }
+  return head;
 }
 
 /** Two 32-bit halves are several times faster than BigInt; whole microseconds of our age fit a double exactly. */

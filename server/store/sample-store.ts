@@ -1,14 +1,15 @@
 import { pipeline } from 'node:stream/promises';
 import { Readable } from 'node:stream';
-import type { PoolClient } from 'pg';
+import { DatabaseError, type PoolClient } from 'pg';
 import { from as copyFrom, to as copyTo } from 'pg-copy-streams';
 import { isKey, timestampOfUtcMs } from '@/db/schema/columns';
 import type { SampleBatch, SampleStore } from '../interfaces/sample-store';
 import type { Connection } from './database';
 import { decodeSamples, encodeSamples, microsecondsOf } from './sample-copy';
 
-/** From this many samples on COPY is worth its temporary table. */
+/** From this many samples on COPY is worth its statements. */
 const copyFromCount = 2000;
+const uniqueViolation = '23505';
 
 /** A batch that cannot be stored: says which sample and why. */
 export class UnusableBatchError extends Error {
@@ -73,7 +74,43 @@ async function insertFew(client: PoolClient, { labId, channelId }: ChannelKey, b
   return result.rowCount ?? 0;
 }
 
-async function copyMany(client: PoolClient, { labId, channelId }: ChannelKey, batch: SampleBatch): Promise<number> {
+/** Where nothing is known yet COPY goes straight into the table, which is twice as fast as to ask for each row. */
+async function copyMany(client: PoolClient, channel: ChannelKey, batch: SampleBatch): Promise<number> {
+  const fresh = !(await holdsAnyOf(client, channel, batch)) && (await copyStraight(client, channel, batch));
+  return fresh ? batch.utcMs.length : copyAside(client, channel, batch);
+}
+
+/** Whether the channel has samples between the first and the last instant of the batch. */
+async function holdsAnyOf(client: PoolClient, { labId, channelId }: ChannelKey, { utcMs }: SampleBatch): Promise<boolean> {
+  let [first, last] = [Infinity, -Infinity];
+  for (const at of utcMs) [first, last] = [Math.min(first, at), Math.max(last, at)];
+  const found = await client.query('select 1 from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4 limit 1', [
+    labId,
+    channelId,
+    timestampOfUtcMs(first),
+    timestampOfUtcMs(last),
+  ]);
+  return found.rowCount === 1;
+}
+
+/** False, with nothing stored, where an instant comes twice in the batch or somebody else has stored it this moment. */
+async function copyStraight(client: PoolClient, { labId, channelId }: ChannelKey, batch: SampleBatch): Promise<boolean> {
+  await client.query('savepoint before_copy');
+  try {
+    await pipeline(
+      Readable.from(encodeSamples(batch, [labId, channelId])),
+      client.query(copyFrom('copy samples (lab_id, channel_id, at, value) from stdin (format binary)')),
+    );
+    await client.query('release savepoint before_copy');
+    return true;
+  } catch (error) {
+    if (!(error instanceof DatabaseError) || error.code !== uniqueViolation) throw error;
+    await client.query('rollback to savepoint before_copy');
+    return false;
+  }
+}
+
+async function copyAside(client: PoolClient, { labId, channelId }: ChannelKey, batch: SampleBatch): Promise<number> {
   await client.query(
     'create temporary table if not exists arriving_samples (at timestamptz not null, value double precision not null) on commit delete rows',
   );

@@ -51,11 +51,23 @@ describe.each([
   });
 });
 
-test('the same instant twice within one batch counts once', async () => {
+test.each([
+  ['a few samples', 2],
+  ['many samples, by COPY', 5000],
+])('of the same instant twice within one batch the first counts: %s', async (_name, count) => {
   const { store, labId, channelId } = await freshChannel();
-  expect(
-    await store.append(labId, channelId, { utcMs: Float64Array.of(eveningUtcMs, eveningUtcMs), value: Float64Array.of(1, 2) }),
-  ).toEqual({ stored: 1, known: 1 });
+  const batch = batchOf(count);
+  batch.utcMs[1] = batch.utcMs[0] as number;
+  expect(await store.append(labId, channelId, batch)).toEqual({ stored: count - 1, known: 1 });
+  expect((await store.read(labId, channelId, allTime)).value[0]).toBe(batch.value[0]);
+});
+
+test('two who store the same at once store it once', async () => {
+  const { store, labId, channelId } = await freshChannel();
+  const batch = batchOf(5000);
+  const done = await Promise.all([1, 2, 3].map(() => store.append(labId, channelId, batch)));
+  expect(done.reduce((sum, { stored }) => sum + stored, 0)).toBe(5000);
+  expect((await store.read(labId, channelId, allTime)).value).toEqual(batch.value);
 });
 
 test('a window takes both of its ends', async () => {
