@@ -1,5 +1,5 @@
 import { Readable } from 'node:stream';
-import { CsvError, parse } from 'csv-parse';
+import { CsvError, Parser } from 'csv-parse';
 import type { ImportMapping } from '@/shared/contracts/data';
 import type { SampleBatch } from '../interfaces/sample-store';
 import { readNumber, readTime, UnreadableField } from './csv-fields';
@@ -44,7 +44,7 @@ export async function readCsv(
   const reader = new RowReader(options.mapping, options.limits);
   const handover = new Handover(options.take ?? (async () => undefined));
   const parser = Readable.from(chunks).pipe(
-    parse({
+    new LineParser({
       bom: true,
       delimiter: options.mapping.delimiter,
       relax_column_count: true,
@@ -53,14 +53,13 @@ export async function readCsv(
       comment: '#',
       comment_no_infix: true,
       trim: true,
-      info: true,
       max_record_size: 1_000_000,
     }),
   );
   try {
     for await (const item of parser) {
-      const { record, info } = item as { record: string[]; info: { lines: number } };
-      reader.row(record, info.lines);
+      const { record, line } = item as LineRecord;
+      reader.row(record, line);
       if (reader.pending >= batchSize) await handover.give(reader.batch());
     }
     await handover.give(reader.batch());
@@ -73,6 +72,19 @@ export async function readCsv(
     await handover.end().catch(() => undefined);
   }
   return reader.result();
+}
+
+interface LineRecord {
+  record: string[];
+  /** Line of the file on which it ends. */
+  line: number;
+}
+
+/** Tells the line of each record, without all else that the parser's own option would collect for each. */
+class LineParser extends Parser {
+  override push(record: unknown): boolean {
+    return super.push(record === null ? null : { record, line: this.info.lines });
+  }
 }
 
 /** Hands batches over one after another; while one is being taken the next is read. */
