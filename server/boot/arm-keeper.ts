@@ -50,7 +50,10 @@ export class MemoryArmKeeper implements ArmKeeper {
   }
 
   /** Tries until it is stored: an arm that ended must not stand again after a restart. */
-  private async store(rig: { labId: string; rigId: string }, end: { armId: string; why: string; by: { id: string | null; name: string }; atUtcMs: number }): Promise<void> {
+  private async store(
+    rig: { labId: string; rigId: string },
+    end: { armId: string; why: string; by: { id: string | null; name: string }; atUtcMs: number },
+  ): Promise<void> {
     const { database, clock, log, sha256 } = this.parts;
     while (!this.closed) {
       try {
@@ -58,7 +61,11 @@ export class MemoryArmKeeper implements ArmKeeper {
           const standing = await currentArm(tx, { ...rig, nowUtcMs: end.atUtcMs });
           if (standing?.id !== end.armId) return;
           await endArm(tx, { ...rig, nowUtcMs: end.atUtcMs, why: end.why });
-          await appendAudit(tx, { labId: rig.labId, who: end.by, kind: 'rig.arm-ended', data: { rigId: rig.rigId, why: end.why }, utcMs: end.atUtcMs }, sha256);
+          await appendAudit(
+            tx,
+            { labId: rig.labId, who: end.by, kind: 'rig.arm-ended', data: { rigId: rig.rigId, why: end.why }, utcMs: end.atUtcMs },
+            sha256,
+          );
         });
         return;
       } catch (error) {

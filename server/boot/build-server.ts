@@ -9,9 +9,8 @@ import { startTicks } from '../scheduler/ticks';
 import { keepHouse } from '../store/housekeeping';
 import { allRigs } from '../store/rigs';
 import { unfinishedRuns } from '../store/runs-read';
-import { buildServices, type BuildParts, type Inside } from './build-services';
-
-export type { BuildOverrides, BuildParts } from './build-services';
+import type { BuildParts } from './build-parts';
+import { buildServices, type Inside } from './build-services';
 
 export interface BuiltServer {
   app: Express;
@@ -80,7 +79,8 @@ class Life {
     inside.tellTakenUp();
     this.refreshRegularly();
     inside.crew.start();
-    if (this.parts.overrides?.ticks ?? services.config.mode !== 'test') this.ticks = startTicks([{ name: 'keep house', cron: '7 * * * *', work: () => keepHouse(db, services.clock.utcMs()) }], services.log);
+    if (this.parts.overrides?.ticks ?? services.config.mode !== 'test')
+      this.ticks = startTicks([{ name: 'keep house', cron: '7 * * * *', work: () => keepHouse(db, services.clock.utcMs()) }], services.log);
   }
 
   async stop(): Promise<void> {

@@ -65,7 +65,8 @@ export class JobCrew {
     const { clock, log, pollMs, crews, queueFor } = this.parts;
     this.workers = Object.entries(crews).map(([name, handlers]) => {
       const queue = new Watched(queueFor(name));
-      const onProblem = ({ job, error }: { job: Job | null; error: unknown }) => log.error({ err: error as Error, job: job?.id ?? null, kind: job?.kind ?? null }, 'a job failed');
+      const onProblem = ({ job, error }: { job: Job | null; error: unknown }) =>
+        log.error({ err: error as Error, job: job?.id ?? null, kind: job?.kind ?? null }, 'a job failed');
       return { queue, worker: startJobWorker({ queue, clock, handlers, pollMs, onProblem }) };
     });
   }

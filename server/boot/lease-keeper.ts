@@ -62,7 +62,8 @@ export class LeaseKeeper {
     this.closed = true;
     this.cancel();
     const { database, clock, holder } = this.parts;
-    for (const { labId, rigId } of this.epochs.values()) await giveRigLease(database.db, { labId, rigId, holder, nowUtcMs: clock.utcMs() }).catch(() => undefined);
+    for (const { labId, rigId } of this.epochs.values())
+      await giveRigLease(database.db, { labId, rigId, holder, nowUtcMs: clock.utcMs() }).catch(() => undefined);
     this.epochs.clear();
   }
 

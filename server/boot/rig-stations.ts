@@ -83,10 +83,15 @@ export class ServerRigStations implements RigStations {
     if (settings.kind === 'serial') await assertPseudoTerminal(settings.path);
   }
 
-  async tryLine(rig: Pick<StationRig, 'document'> & { id?: string }, settings: LinkSettings): Promise<{ ok: boolean; detail: string; firmware: string | null }> {
+  async tryLine(
+    rig: Pick<StationRig, 'document'> & { id?: string },
+    settings: LinkSettings,
+  ): Promise<{ ok: boolean; detail: string; firmware: string | null }> {
     const { motion } = rig.document;
-    if (motion === undefined) return { ok: false, detail: 'The rig document has no motion data (steps per degree, limits); enter them first.', firmware: null };
-    if (settings.kind === 'simulated') return { ok: true, detail: 'The simulated turntable is part of this server and always answers.', firmware: 'simulated' };
+    if (motion === undefined)
+      return { ok: false, detail: 'The rig document has no motion data (steps per degree, limits); enter them first.', firmware: null };
+    if (settings.kind === 'simulated')
+      return { ok: true, detail: 'The simulated turntable is part of this server and always answers.', firmware: 'simulated' };
     const own = this.openOn(settings);
     if (own !== null) return ownAnswer(own);
     return tryLink({ factory: this.factoryOf(settings), clock: this.parts.clock });
@@ -122,11 +127,23 @@ export class ServerRigStations implements RigStations {
 
   private openOn(settings: LinkSettings): RigStation | null {
     if (settings.kind !== 'serial') return null;
-    return [...this.stations.values()].find((station) => station.settings.kind === 'serial' && station.settings.path === settings.path) ?? null;
+    return (
+      [...this.stations.values()].find((station) => station.settings.kind === 'serial' && station.settings.path === settings.path) ?? null
+    );
   }
 
   private async simulatedChannel(rig: StationRig): Promise<RigStation['channel']> {
-    const wanted = { labId: rig.labId, rigId: rig.id, runId: null, name: 'deflection', quantity: 'pendulum angle', unit: 'rad', role: 'deflection' as const, source: 'simulated' as const, createdAt: this.parts.clock.utcMs() };
+    const wanted = {
+      labId: rig.labId,
+      rigId: rig.id,
+      runId: null,
+      name: 'deflection',
+      quantity: 'pendulum angle',
+      unit: 'rad',
+      role: 'deflection' as const,
+      source: 'simulated' as const,
+      createdAt: this.parts.clock.utcMs(),
+    };
     const channel = await findOrMakeChannel(this.parts.database.db, wanted);
     return { id: channel.id, name: channel.name, unit: channel.unit };
   }
@@ -139,9 +156,13 @@ export class ServerRigStations implements RigStations {
     return apparatus.flow(
       (batch) => {
         sink.add(batch);
-        for (const listener of this.listeners) listener({ rigId: station.rigId, channelId: channel.id, channel: channel.name, unit: channel.unit, ...batch });
+        for (const listener of this.listeners)
+          listener({ rigId: station.rigId, channelId: channel.id, channel: channel.name, unit: channel.unit, ...batch });
       },
-      { positionKnown: () => station.link.controller()?.positionKnown ?? true, onError: (error) => log.error({ err: error, rigId: station.rigId }, 'the simulated balance failed') },
+      {
+        positionKnown: () => station.link.controller()?.positionKnown ?? true,
+        onError: (error) => log.error({ err: error, rigId: station.rigId }, 'the simulated balance failed'),
+      },
     );
   }
 }
@@ -149,6 +170,7 @@ export class ServerRigStations implements RigStations {
 function ownAnswer(station: RigStation): { ok: boolean; detail: string; firmware: string | null } {
   const { condition, detail } = station.link.health();
   const firmware = station.link.controller()?.firmware ?? null;
-  if (condition === 'ready') return { ok: true, detail: `This line is open and the controller answers, firmware ${firmware ?? 'unknown'}.`, firmware };
+  if (condition === 'ready')
+    return { ok: true, detail: `This line is open and the controller answers, firmware ${firmware ?? 'unknown'}.`, firmware };
   return { ok: false, detail: `This line is open already, but the controller does not answer: ${detail}.`, firmware: null };
 }

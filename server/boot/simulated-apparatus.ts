@@ -36,7 +36,10 @@ export class SimulatedApparatus {
     this.controller =
       parts.controller ??
       createSimulatedController({
-        clock, rig: document.motion, seed: this.born.seed, uptimeS: this.born.uptimeS,
+        clock,
+        rig: document.motion,
+        seed: this.born.seed,
+        uptimeS: this.born.uptimeS,
         ...(before === null ? {} : { startDeg: within(document.motion, before.angleDeg), homed: before.positionKnown }),
       });
     this.sources = JSON.stringify(document.sources);
@@ -82,7 +85,14 @@ export class SimulatedApparatus {
   private newBalance(document: RigDocument): SimulatedBalance {
     const { clock, seed } = this.parts;
     const nowUtcMs = clock.utcMs();
-    return createSimulatedBalance({ rig: document, bigG: CODATA_2022_G.value, seed, rateHz, startUtcMs: nowUtcMs, startDeg: this.controller.trueAngleDegAt(nowUtcMs) });
+    return createSimulatedBalance({
+      rig: document,
+      bigG: CODATA_2022_G.value,
+      seed,
+      rateHz,
+      startUtcMs: nowUtcMs,
+      startDeg: this.controller.trueAngleDegAt(nowUtcMs),
+    });
   }
 }
 

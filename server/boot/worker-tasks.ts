@@ -61,7 +61,8 @@ class Lane {
 export function createWorkerTasks(): HeavyTasks & { close(): Promise<void> } {
   const jobs = new Lane();
   const downloads = new Lane();
-  const on = <K extends keyof HeavyTasks>(lane: Lane, task: K) => ((...args: unknown[]) => lane.call(task, args)) as unknown as HeavyTasks[K];
+  const on = <K extends keyof HeavyTasks>(lane: Lane, task: K) =>
+    ((...args: unknown[]) => lane.call(task, args)) as unknown as HeavyTasks[K];
   return {
     rehearse: on(jobs, 'rehearse'),
     evaluate: on(jobs, 'evaluate'),

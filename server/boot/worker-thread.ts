@@ -9,7 +9,8 @@ export interface WorkerCall {
   args: unknown[];
 }
 
-export type WorkerAnswer = { id: number; value: unknown } | { id: number; error: { name: string; message: string; code: string | null; stack: string } };
+export type WorkerAnswer =
+  { id: number; value: unknown } | { id: number; error: { name: string; message: string; code: string | null; stack: string } };
 
 parentPort?.on('message', (call: WorkerCall) => {
   const task = heavyTasks[call.task] as (...args: unknown[]) => Promise<unknown>;

@@ -7,7 +7,13 @@ export interface AccessSource {
   user(userId: string): Promise<{ id: string; name: string; email: string } | null>;
   membership(userId: string, labId: string): Promise<Membership | null>;
   /** Sessions within their absolute life and memberships of everybody in these labs, for the memory copy. */
-  ofLabs(labIds: readonly string[]): Promise<{ sessions: Session[]; users: { id: string; name: string; email: string }[]; memberships: (Membership & { userId: string })[] }>;
+  ofLabs(
+    labIds: readonly string[],
+  ): Promise<{
+    sessions: Session[];
+    users: { id: string; name: string; email: string }[];
+    memberships: (Membership & { userId: string })[];
+  }>;
 }
 
 export type EndedAccess = { sessionId: string } | { userId: string };
@@ -34,9 +40,7 @@ export class AccessDirectory {
   private watched: ReadonlySet<string> = new Set();
   private readonly listeners = new Set<(ended: EndedAccess) => void>();
 
-  constructor(
-    private readonly parts: { source: AccessSource; sessions: SessionPort; clock: Clock; sha256: (text: string) => string },
-  ) {}
+  constructor(private readonly parts: { source: AccessSource; sessions: SessionPort; clock: Clock; sha256: (text: string) => string }) {}
 
   /** The signed-in account of a cookie token, or null. */
   async signedIn(token: string): Promise<SignedIn | null> {
@@ -76,7 +80,9 @@ export class AccessDirectory {
     }
     const found = await this.parts.source.ofLabs(labIds);
     const nowMs = this.parts.clock.utcMs();
-    const idledOut = [...this.copy.sessions.values()].filter((session) => session.expiresAt.getTime() <= nowMs && nowMs - session.createdAt.getTime() <= absoluteLifeMs);
+    const idledOut = [...this.copy.sessions.values()].filter(
+      (session) => session.expiresAt.getTime() <= nowMs && nowMs - session.createdAt.getTime() <= absoluteLifeMs,
+    );
     this.copy = {
       sessions: new Map([...idledOut, ...found.sessions].map((session) => [session.id, session])),
       users: new Map(found.users.map((user) => [user.id, user])),

@@ -31,14 +31,26 @@ export function answerRoute(route: MountedRoute, parts: RouteParts): RequestHand
     const ifMatch = readIfMatch(contract, req);
     const reply: { etag: string | null } = { etag: null };
     const context = {
-      ...caller, ...sessionCookies(res, parts.services), params: req.params, query, body, ifMatch, services: parts.services, req, res,
+      ...caller,
+      ...sessionCookies(res, parts.services),
+      params: req.params,
+      query,
+      body,
+      ifMatch,
+      services: parts.services,
+      req,
+      res,
       setEtag: (version: string) => {
         reply.etag = version;
       },
     } as unknown as RouteContext;
     const act = async (): Promise<IdempotencyAnswer> => {
       const value = await route.handle(context);
-      return { status: contract.status, body: contract.response === undefined ? null : checkedResponse(contract.response, value, parts.services), etag: reply.etag };
+      return {
+        status: contract.status,
+        body: contract.response === undefined ? null : checkedResponse(contract.response, value, parts.services),
+        etag: reply.etag,
+      };
     };
     if (contract.produces !== undefined) {
       await route.handle(context);
@@ -50,10 +62,17 @@ export function answerRoute(route: MountedRoute, parts: RouteParts): RequestHand
   };
 }
 
-function once(contract: RouteContract, from: { context: RouteContext; req: Request; parts: RouteParts }, act: () => Promise<IdempotencyAnswer>): Promise<IdempotencyAnswer> {
+function once(
+  contract: RouteContract,
+  from: { context: RouteContext; req: Request; parts: RouteParts },
+  act: () => Promise<IdempotencyAnswer>,
+): Promise<IdempotencyAnswer> {
   const { context, req, parts } = from;
   const key = idempotencyKeyOf(req.get('idempotency-key'));
-  const fingerprint = fingerprintOf({ method: req.method, path: req.path, ifMatch: context.ifMatch, body: context.body }, parts.services.sha256);
+  const fingerprint = fingerprintOf(
+    { method: req.method, path: req.path, ifMatch: context.ifMatch, body: context.body },
+    parts.services.sha256,
+  );
   const port = isIntervention(contract) ? parts.interventionKeys : parts.services.idempotency;
   const me = context.me as SignedIn | null;
   return actOnce(port, { userId: me?.userId ?? '', key, fingerprint }, act);
@@ -67,14 +86,19 @@ function send(res: Response, req: Request, answer: IdempotencyAnswer): void {
   else res.status(answer.status).json(answer.body);
 }
 
-async function identify(contract: RouteContract, req: Request, services: Services): Promise<{ me: SignedIn | null; membership: Membership | null }> {
+async function identify(
+  contract: RouteContract,
+  req: Request,
+  services: Services,
+): Promise<{ me: SignedIn | null; membership: Membership | null }> {
   const token = readSessionToken(req, services.config);
   if (contract.access === 'public') return { me: null, membership: null };
   if (token === null) throw new ProblemError('not-signed-in', 'Sign in first; the request carries no session.');
   const labId = typeof req.params.labId === 'string' ? req.params.labId : '';
   const remembered = isIntervention(contract) ? services.access.remembered(token, labId) : null;
   const me = remembered?.me ?? (await services.access.signedIn(token));
-  if (me === null) throw new ProblemError('session-expired', 'The session has ended. Sign in again; what you typed is still on the screen.');
+  if (me === null)
+    throw new ProblemError('session-expired', 'The session has ended. Sign in again; what you typed is still on the screen.');
   if (contract.access === 'signed-in') return { me, membership: null };
   const membership = remembered?.membership ?? (await services.access.membership(me.userId, labId));
   if (membership === null) throw notFound('lab');
@@ -99,15 +123,27 @@ function parsed(where: 'query' | 'body', contract: RouteContract, value: unknown
 
 const hasBody = (req: Request) => req.headers['transfer-encoding'] !== undefined || Number(req.headers['content-length'] ?? 0) > 0;
 
-async function readBody(contract: RouteContract, { req, res, readJson }: { req: Request; res: Response; readJson: RequestHandler }): Promise<unknown> {
+async function readBody(
+  contract: RouteContract,
+  { req, res, readJson }: { req: Request; res: Response; readJson: RequestHandler },
+): Promise<unknown> {
   if (contract.consumes !== undefined) {
-    if (req.get('content-encoding') !== undefined) throw new ProblemError('wrong-content-type', 'This route takes the file as it is, without a content encoding.');
-    if (req.is(contract.consumes) === false) throw new ProblemError('wrong-content-type', `This route takes ${contract.consumes}; the request said ${req.get('content-type') ?? 'nothing'}.`);
+    if (req.get('content-encoding') !== undefined)
+      throw new ProblemError('wrong-content-type', 'This route takes the file as it is, without a content encoding.');
+    if (req.is(contract.consumes) === false)
+      throw new ProblemError(
+        'wrong-content-type',
+        `This route takes ${contract.consumes}; the request said ${req.get('content-type') ?? 'nothing'}.`,
+      );
     return undefined;
   }
   if (contract.body === undefined) return undefined;
   if (!hasBody(req)) return parsed('body', contract, {});
-  if (req.is('application/json') === false) throw new ProblemError('wrong-content-type', `This route takes application/json; the request said ${req.get('content-type') ?? 'nothing'}.`);
+  if (req.is('application/json') === false)
+    throw new ProblemError(
+      'wrong-content-type',
+      `This route takes application/json; the request said ${req.get('content-type') ?? 'nothing'}.`,
+    );
   await new Promise<void>((resolve, reject) => {
     void readJson(req, res, (error?: unknown) => {
       if (error === undefined) resolve();
@@ -119,7 +155,8 @@ async function readBody(contract: RouteContract, { req, res, readJson }: { req: 
 
 function readIfMatch(contract: RouteContract, req: Request): string | null {
   const version = req.get('if-match')?.replace(/^(?:W\/)?"(.*)"$/, '$1') ?? null;
-  if (contract.etag === 'required' && (version === null || version === '')) throw new ProblemError('precondition-required', 'Name the version you edited: send its ETag in the header If-Match.');
+  if (contract.etag === 'required' && (version === null || version === ''))
+    throw new ProblemError('precondition-required', 'Name the version you edited: send its ETag in the header If-Match.');
   return version;
 }
 
@@ -131,4 +168,5 @@ function sessionCookies(res: Response, services: Services) {
 }
 
 /** Reader of JSON bodies up to `limitBytes`; scalars are JSON too and get the schema's own refusal. */
-export const jsonReader = (limitBytes: number): RequestHandler => express.json({ limit: limitBytes, strict: false, type: 'application/json' });
+export const jsonReader = (limitBytes: number): RequestHandler =>
+  express.json({ limit: limitBytes, strict: false, type: 'application/json' });

@@ -36,7 +36,14 @@ export async function archiveInputOf(services: Services, run: RunRecord): Promis
   const { start } = run;
   return {
     run: {
-      runId: run.id, outcome: outcomeOf(run), operator: start.operator, startedAtUtcMs: run.startedAt, endedAtUtcMs: run.endedAt, notes: start.notes, massSetLabel: start.massSetLabel, simulated: start.simulated,
+      runId: run.id,
+      outcome: outcomeOf(run),
+      operator: start.operator,
+      startedAtUtcMs: run.startedAt,
+      endedAtUtcMs: run.endedAt,
+      notes: start.notes,
+      massSetLabel: start.massSetLabel,
+      simulated: start.simulated,
     },
     rig: start.rig,
     protocol: start.protocol,

@@ -12,7 +12,13 @@ export function audited<T>(
   const { me, membership, services } = context;
   return services.database.db.transaction(async (tx) => {
     const done = await act(tx);
-    const fact = { labId: membership.labId, who: { id: me.userId, name: me.name }, kind: entry.kind, data: entry.data(done), utcMs: services.clock.utcMs() };
+    const fact = {
+      labId: membership.labId,
+      who: { id: me.userId, name: me.name },
+      kind: entry.kind,
+      data: entry.data(done),
+      utcMs: services.clock.utcMs(),
+    };
     await appendAudit(tx, fact, services.sha256);
     return done;
   });

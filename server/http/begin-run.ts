@@ -37,14 +37,26 @@ export function assertFreshTap(tappedAt: string | undefined, nowUtcMs: number, a
   if (tappedAt === undefined) return;
   const ageMs = nowUtcMs - Date.parse(tappedAt);
   if (Math.abs(ageMs) <= longestTapMs) return;
-  const words = ageMs > 0 ? `was made ${String(Math.round(ageMs / 1000))} s ago` : 'lies in the future by the server\'s clock';
-  throw new ProblemError('not-possible-now', `The tap to ${act} ${words}; it counts for 5 s. Nothing was moved. Look at the rig again, then ${act} once more.`);
+  const words = ageMs > 0 ? `was made ${String(Math.round(ageMs / 1000))} s ago` : "lies in the future by the server's clock";
+  throw new ProblemError(
+    'not-possible-now',
+    `The tap to ${act} ${words}; it counts for 5 s. Nothing was moved. Look at the rig again, then ${act} once more.`,
+  );
 }
 
 function runStartOf({ me, membership, services }: Caller, begin: Begin): Omit<RunStart, 'rig' | 'massSetLabel' | 'arm' | 'simulated'> {
   return {
-    labId: membership.labId, runId: services.newId(), rigId: begin.rig.id, rigName: begin.rig.name, rigRevision: begin.rig.revision, protocolName: begin.protocol.name, protocolRevision: begin.revision,
-    protocol: begin.protocol, timeZone: membership.timeZone, operator: me.name, notes: begin.notes,
+    labId: membership.labId,
+    runId: services.newId(),
+    rigId: begin.rig.id,
+    rigName: begin.rig.name,
+    rigRevision: begin.rig.revision,
+    protocolName: begin.protocol.name,
+    protocolRevision: begin.revision,
+    protocol: begin.protocol,
+    timeZone: membership.timeZone,
+    operator: me.name,
+    notes: begin.notes,
   };
 }
 
@@ -53,9 +65,13 @@ function refusalOfChecks({ checks }: StartReport): ProblemError | null {
   const [first] = failed;
   if (first === undefined) return null;
   const code = failed.some((check) => check.code === 'free') ? 'rig-busy' : first.code === 'armed' ? 'not-armed' : 'not-ready';
-  const leading = code === 'rig-busy' ? failed.find((check) => check.code === 'free') ?? first : first;
+  const leading = code === 'rig-busy' ? (failed.find((check) => check.code === 'free') ?? first) : first;
   const more = failed.length > 1 ? ` ${String(failed.length - 1)} more stand against a start.` : '';
-  return new ProblemError(code, `${leading.title}: ${leading.detail}${more}`, failed.map((check) => ({ path: check.code, message: `${check.title}: ${check.detail}`, code: check.code })));
+  return new ProblemError(
+    code,
+    `${leading.title}: ${leading.detail}${more}`,
+    failed.map((check) => ({ path: check.code, message: `${check.title}: ${check.detail}`, code: check.code })),
+  );
 }
 
 /** Starts a run: checks, the row in the database, then the engine. */
@@ -64,12 +80,20 @@ export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSet
   const document = { ...begin.rig.document, sources: begin.massSet.sources };
   const refusal = refusalOf(checkProtocol(begin.protocol, document));
   if (refusal !== null) throw refusal;
-  const report = await makeStartChecks(services, { rig: begin.rig, document, protocol: begin.protocol, timeZone: caller.membership.timeZone });
+  const report = await makeStartChecks(services, {
+    rig: begin.rig,
+    document,
+    protocol: begin.protocol,
+    timeZone: caller.membership.timeZone,
+  });
   const stands = refusalOfChecks(report);
   if (stands !== null) throw stands;
   const arm = services.arms.armOf(begin.rig.id);
   const start: RunStart = {
-    ...runStartOf(caller, begin), rig: document, massSetLabel: begin.massSet.label, simulated: null,
+    ...runStartOf(caller, begin),
+    rig: document,
+    massSetLabel: begin.massSet.label,
+    simulated: null,
     arm: arm === null ? null : { name: arm.name, untilUtcMs: arm.untilUtcMs },
   };
   try {
@@ -79,19 +103,46 @@ export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSet
     return run;
   } catch (error) {
     if (!(error instanceof StartRefused)) throw error;
-    throw new ProblemError(error.code, error.message, error.findings.map((finding) => ({ path: finding.path ?? '', message: finding.message, code: finding.code })));
+    throw new ProblemError(
+      error.code,
+      error.message,
+      error.findings.map((finding) => ({ path: finding.path ?? '', message: finding.message, code: finding.code })),
+    );
   }
 }
 
-async function storeStart(caller: Caller, start: RunStart, with_: { begin: Begin; massSetId: string; finishUtcMs: number }): Promise<RunRecord> {
+async function storeStart(
+  caller: Caller,
+  start: RunStart,
+  with_: { begin: Begin; massSetId: string; finishUtcMs: number },
+): Promise<RunRecord> {
   const { services } = caller;
   const { db } = services.database;
-  const entry = { kind: 'run.started', data: () => ({ runId: start.runId, rigId: start.rigId, protocolId: with_.begin.protocolId, revision: start.protocolRevision, arm: start.arm }) };
+  const entry = {
+    kind: 'run.started',
+    data: () => ({
+      runId: start.runId,
+      rigId: start.rigId,
+      protocolId: with_.begin.protocolId,
+      revision: start.protocolRevision,
+      arm: start.arm,
+    }),
+  };
   await audited(caller, entry, async (tx) => {
-    const row = { start, protocolId: with_.begin.protocolId, massSetId: with_.massSetId, state: 'starting' as const, nowUtcMs: services.clock.utcMs(), predictedEndUtcMs: with_.finishUtcMs };
+    const row = {
+      start,
+      protocolId: with_.begin.protocolId,
+      massSetId: with_.massSetId,
+      state: 'starting' as const,
+      nowUtcMs: services.clock.utcMs(),
+      predictedEndUtcMs: with_.finishUtcMs,
+    };
     if (await insertRun(tx, row)) return;
     const other = (await activeRuns(db, start.labId)).get(start.rigId);
-    throw new ProblemError('rig-busy', other === undefined ? `${start.rigName} was taken by another run this very moment.` : busyWords(other));
+    throw new ProblemError(
+      'rig-busy',
+      other === undefined ? `${start.rigName} was taken by another run this very moment.` : busyWords(other),
+    );
   });
   const run = await findRun(db, start.labId, start.runId);
   if (run === null) throw new Error('the new run was not found');
@@ -106,10 +157,14 @@ function drive(services: Services, run: RunRecord): void {
   } catch (error) {
     services.activeRuns.remove(run.id);
     const why = error instanceof Error ? error.message : String(error);
-    markRunFailed(services.database.db, run, { why, nowUtcMs: services.clock.utcMs() }).catch((failure: unknown) => services.log.error({ err: failure, runId: run.id }, 'a run that did not start could not be marked'));
+    markRunFailed(services.database.db, run, { why, nowUtcMs: services.clock.utcMs() }).catch((failure: unknown) =>
+      services.log.error({ err: failure, runId: run.id }, 'a run that did not start could not be marked'),
+    );
     throw error;
   }
-  services.access.refresh(services.activeRuns.labIds()).catch((error: unknown) => services.log.warn({ err: error }, 'sessions could not be copied into memory'));
+  services.access
+    .refresh(services.activeRuns.labIds())
+    .catch((error: unknown) => services.log.warn({ err: error }, 'sessions could not be copied into memory'));
 }
 
 const rehearsalRateHz = 10;
@@ -121,7 +176,10 @@ export async function beginRehearsal(caller: Caller, begin: Begin & { seed: numb
   if (refusal !== null) throw refusal;
   const nowUtcMs = services.clock.utcMs();
   const start: RunStart = {
-    ...runStartOf(caller, begin), rig: begin.rig.document, massSetLabel: 'As in the rig document', arm: null,
+    ...runStartOf(caller, begin),
+    rig: begin.rig.document,
+    massSetLabel: 'As in the rig document',
+    arm: null,
     simulated: { trueG: CODATA_2022_G.value, seed: begin.seed, rateHz: rehearsalRateHz, faults: [] },
   };
   await services.database.db.transaction(async (tx) => {

@@ -31,7 +31,8 @@ export function createApp(services: Services, routes: readonly MountedRoute[]): 
 }
 
 /** A compressed event stream would be held back until a block is full. */
-const mayCompress: typeof compression.filter = (req, res) => !String(res.getHeader('Content-Type')).startsWith('text/event-stream') && compression.filter(req, res);
+const mayCompress: typeof compression.filter = (req, res) =>
+  !String(res.getHeader('Content-Type')).startsWith('text/event-stream') && compression.filter(req, res);
 
 function apiRouter(services: Services, routes: readonly MountedRoute[]): Router {
   const { limits } = services.config;

@@ -5,9 +5,10 @@ import { ProblemError, type ProblemItem } from './problem-error';
 const pathOf = (path: readonly PropertyKey[]) => path.map(String).join('.');
 
 /** Problems of a zod check, one item each, by path into `where` (`body`, `query`). */
-export function itemsOf(error: z.core.$ZodError): ProblemItem[] {
+function itemsOf(error: z.core.$ZodError): ProblemItem[] {
   return error.issues.flatMap((issue) => {
-    if (issue.code === 'unrecognized_keys') return issue.keys.map((key) => ({ path: pathOf([...issue.path, key]), message: `"${key}" is not known here` }));
+    if (issue.code === 'unrecognized_keys')
+      return issue.keys.map((key) => ({ path: pathOf([...issue.path, key]), message: `"${key}" is not known here` }));
     if (issue.code === 'invalid_union') return [nearestBranch(issue)];
     return [{ path: pathOf(issue.path), message: issue.message }];
   });
@@ -16,7 +17,9 @@ export function itemsOf(error: z.core.$ZodError): ProblemItem[] {
 /** Of a union the branch with the fewest complaints says best what is wrong. */
 function nearestBranch(issue: z.core.$ZodIssueInvalidUnion): ProblemItem {
   const branch = [...issue.errors].sort((a, b) => a.length - b.length)[0]?.[0];
-  return branch === undefined ? { path: pathOf(issue.path), message: issue.message } : { path: pathOf([...issue.path, ...branch.path]), message: branch.message };
+  return branch === undefined
+    ? { path: pathOf(issue.path), message: issue.message }
+    : { path: pathOf([...issue.path, ...branch.path]), message: branch.message };
 }
 
 /** The refusal of a part of a request that does not fit its schema. */
@@ -31,13 +34,15 @@ export function invalidInput(where: 'body' | 'query' | 'document', error: z.core
 const bodyErrors: Record<string, () => ProblemError> = {
   'entity.too.large': () => new ProblemError('too-large', 'The body of the request is larger than this route takes.'),
   'entity.parse.failed': () => new ProblemError('invalid-input', 'The body of the request is not JSON.'),
-  'encoding.unsupported': () => new ProblemError('wrong-content-type', 'The content encoding of the body is not known; send it plain or with gzip.'),
+  'encoding.unsupported': () =>
+    new ProblemError('wrong-content-type', 'The content encoding of the body is not known; send it plain or with gzip.'),
   'charset.unsupported': () => new ProblemError('wrong-content-type', 'The body must be UTF-8.'),
 };
 
 /** Codes by which Node and PostgreSQL (classes 08, 53 and 57P) say that the database cannot be reached or is going away. */
 const awayCode = /^(ECONN\w+|EPIPE|ETIMEDOUT|ENOTFOUND|EAI_AGAIN|ENOENT|08\w{3}|53\w{3}|57P\d\d)$/;
-const awayText = /Connection terminated|timeout exceeded when trying to connect|Client has encountered a connection error|Cannot use a pool after calling end/;
+const awayText =
+  /Connection terminated|timeout exceeded when trying to connect|Client has encountered a connection error|Cannot use a pool after calling end/;
 
 interface ErrorLike {
   code?: unknown;
@@ -51,7 +56,7 @@ interface ErrorLike {
 const isErrorLike = (value: unknown): value is ErrorLike => typeof value === 'object' && value !== null;
 
 /** Whether a failure means that the database is away, looking through the wrappers of drivers and mappers. */
-export function isDatabaseAway(error: unknown): boolean {
+function isDatabaseAway(error: unknown): boolean {
   if (!isErrorLike(error)) return false;
   if (typeof error.code === 'string' && awayCode.test(error.code) && !isFileError(error)) return true;
   if (typeof error.message === 'string' && awayText.test(error.message)) return true;
@@ -67,9 +72,16 @@ export function problemErrorOf(error: unknown): ProblemError {
   if (isErrorLike(error)) {
     const known = typeof error.type === 'string' ? bodyErrors[error.type] : undefined;
     if (known !== undefined) return known();
-    if (isDatabaseAway(error)) return new ProblemError('database-away', 'The database does not answer at the moment. Nothing was changed; hold and stop still work. Try again in a few seconds.');
+    if (isDatabaseAway(error))
+      return new ProblemError(
+        'database-away',
+        'The database does not answer at the moment. Nothing was changed; hold and stop still work. Try again in a few seconds.',
+      );
     if (error.status === 400) return new ProblemError('invalid-input', 'The address or the body of the request could not be read.');
     if (error.status === 404) return new ProblemError('not-found', 'There is nothing at this address.');
   }
-  return new ProblemError('internal', 'Something unforeseen happened on the server. It was written to its log under the number given as instance.');
+  return new ProblemError(
+    'internal',
+    'Something unforeseen happened on the server. It was written to its log under the number given as instance.',
+  );
 }

@@ -5,12 +5,19 @@ import { ProblemError, problemOf } from './problem-error';
 /** Reads an `Idempotency-Key` (draft-ietf-httpapi-idempotency-key-header-07: a quoted string; bare text is taken too). */
 export function idempotencyKeyOf(header: string | undefined): string {
   const key = header?.replace(/^"(.*)"$/, '$1') ?? '';
-  if (!/^[\x21-\x7e]{1,128}$/.test(key)) throw new ProblemError('invalid-input', 'A command needs the header Idempotency-Key: 1 to 128 visible characters, new for each command and the same for each repeat of it.');
+  if (!/^[\x21-\x7e]{1,128}$/.test(key))
+    throw new ProblemError(
+      'invalid-input',
+      'A command needs the header Idempotency-Key: 1 to 128 visible characters, new for each command and the same for each repeat of it.',
+    );
   return key;
 }
 
 /** What makes two requests the same: route, address, named version and body. */
-export function fingerprintOf(request: { method: string; path: string; ifMatch: string | null; body: unknown }, sha256: (text: string) => string): string {
+export function fingerprintOf(
+  request: { method: string; path: string; ifMatch: string | null; body: unknown },
+  sha256: (text: string) => string,
+): string {
   return sha256(canonicalize({ ...request, body: request.body ?? null }) ?? '');
 }
 
@@ -18,11 +25,20 @@ export function fingerprintOf(request: { method: string; path: string; ifMatch: 
  * Acts once for a key. A repeat gets the first answer, problems that were decided included; a failure on our side
  * gives the key back.
  */
-export async function actOnce(port: IdempotencyPort, claim: IdempotencyClaim, act: () => Promise<IdempotencyAnswer>): Promise<IdempotencyAnswer> {
+export async function actOnce(
+  port: IdempotencyPort,
+  claim: IdempotencyClaim,
+  act: () => Promise<IdempotencyAnswer>,
+): Promise<IdempotencyAnswer> {
   const state = await port.begin(claim);
   if (state.kind === 'answered') return state.answer;
-  if (state.kind === 'running') throw new ProblemError('still-running', 'The first request with this Idempotency-Key has not been answered yet. Ask again in a second with the same key.');
-  if (state.kind === 'other-request') throw new ProblemError('key-reused', 'This Idempotency-Key was used for another request. Each command needs a key of its own.');
+  if (state.kind === 'running')
+    throw new ProblemError(
+      'still-running',
+      'The first request with this Idempotency-Key has not been answered yet. Ask again in a second with the same key.',
+    );
+  if (state.kind === 'other-request')
+    throw new ProblemError('key-reused', 'This Idempotency-Key was used for another request. Each command needs a key of its own.');
   try {
     const answer = await act();
     await port.finish(claim, answer);
@@ -30,7 +46,11 @@ export async function actOnce(port: IdempotencyPort, claim: IdempotencyClaim, ac
   } catch (error) {
     if (error instanceof ProblemError && isDecided(error)) {
       const problem = problemOf(error, '');
-      await port.finish(claim, { status: problem.status, body: { code: error.code, detail: error.detail, errors: error.errors ?? null }, etag: null });
+      await port.finish(claim, {
+        status: problem.status,
+        body: { code: error.code, detail: error.detail, errors: error.errors ?? null },
+        etag: null,
+      });
     } else {
       await port.release(claim);
     }

@@ -12,15 +12,25 @@ import type { Services } from './services';
 /** Refuses a mapping that cannot be meant, whatever the file holds. */
 export function assertMapping(mapping: ImportMapping): void {
   if (mapping.timeFormat === 'elapsed-s' && mapping.elapsedFrom === undefined)
-    throw new ProblemError('invalid-input', 'Times in seconds elapsed need the instant they count from: state elapsedFrom in UTC.', [{ path: 'mapping.elapsedFrom', message: 'an instant in UTC, for example 2031-03-14T22:00:00Z' }]);
+    throw new ProblemError('invalid-input', 'Times in seconds elapsed need the instant they count from: state elapsedFrom in UTC.', [
+      { path: 'mapping.elapsedFrom', message: 'an instant in UTC, for example 2031-03-14T22:00:00Z' },
+    ]);
   if (mapping.timeColumn === mapping.valueColumn)
-    throw new ProblemError('invalid-input', 'Time and value are said to stand in the same column; choose two.', [{ path: 'mapping.valueColumn', message: 'another column than that of the time' }]);
+    throw new ProblemError('invalid-input', 'Time and value are said to stand in the same column; choose two.', [
+      { path: 'mapping.valueColumn', message: 'another column than that of the time' },
+    ]);
   if (mapping.decimal === mapping.delimiter)
-    throw new ProblemError('invalid-input', 'The comma cannot part the columns and be the decimal sign at once.', [{ path: 'mapping.decimal', message: 'a sign other than the delimiter' }]);
+    throw new ProblemError('invalid-input', 'The comma cannot part the columns and be the decimal sign at once.', [
+      { path: 'mapping.decimal', message: 'a sign other than the delimiter' },
+    ]);
 }
 
 /** Reads the kept file with a mapping; problems of the whole file come in front. */
-export async function readImport(services: Services, source: { file: ImportRecord; run: RunRecord; mapping: ImportMapping }, take?: (batch: SampleBatch) => Promise<void>): Promise<CsvReading & { ok: boolean; overlap: string }> {
+export async function readImport(
+  services: Services,
+  source: { file: ImportRecord; run: RunRecord; mapping: ImportMapping },
+  take?: (batch: SampleBatch) => Promise<void>,
+): Promise<CsvReading & { ok: boolean; overlap: string }> {
   const { file, run, mapping } = source;
   const nowUtcMs = services.clock.utcMs();
   const span = greatestSpan(run.start.rig, mapping.unit);
@@ -29,8 +39,14 @@ export async function readImport(services: Services, source: { file: ImportRecor
   const reading = await readCsv(pieces, take === undefined ? options : { ...options, take });
   const overlap = overlapOf(reading, run, nowUtcMs);
   const ofFile: CsvProblem[] = [];
-  if (span === 'no-lever') ofFile.push({ row: null, column: null, message: `the unit ${mapping.unit} is a spot position, but the rig has no lever (distance from mirror to scale) to turn it into an angle` });
-  if (reading.problemCount === 0 && overlap.share === 0) ofFile.push({ row: null, column: null, message: `${overlap.words}: are time format, zone and start of the mapping right?` });
+  if (span === 'no-lever')
+    ofFile.push({
+      row: null,
+      column: null,
+      message: `the unit ${mapping.unit} is a spot position, but the rig has no lever (distance from mirror to scale) to turn it into an angle`,
+    });
+  if (reading.problemCount === 0 && overlap.share === 0)
+    ofFile.push({ row: null, column: null, message: `${overlap.words}: are time format, zone and start of the mapping right?` });
   const problems = [...ofFile, ...reading.problems].slice(0, 100);
   const problemCount = reading.problemCount + ofFile.length;
   return { ...reading, problems, problemCount, ok: problemCount === 0, overlap: overlap.words };
@@ -44,7 +60,8 @@ function overlapOf(reading: CsvReading, run: RunRecord, nowUtcMs: number): { sha
   if (firstUtcMs === null || lastUtcMs === null) return { share: 0, words: 'no row could be read' };
   const common = Math.min(to, lastUtcMs) - Math.max(from, firstUtcMs);
   if (common <= 0) {
-    const side = lastUtcMs <= from ? `end ${spoken(from - lastUtcMs)} before the run began` : `begin ${spoken(firstUtcMs - to)} after the run ended`;
+    const side =
+      lastUtcMs <= from ? `end ${spoken(from - lastUtcMs)} before the run began` : `begin ${spoken(firstUtcMs - to)} after the run ended`;
     return { share: 0, words: `the data ${side}` };
   }
   const share = common / (to - from);
@@ -59,6 +76,12 @@ function spoken(ms: number): string {
 }
 
 export const checkViewOf = (reading: Awaited<ReturnType<typeof readImport>>): ImportCheck => ({
-  ok: reading.ok, rows: reading.rows, firstAt: isoOrNull(reading.firstUtcMs), lastAt: isoOrNull(reading.lastUtcMs), medianIntervalS: reading.medianIntervalS, problems: reading.problems,
-  problemCount: reading.problemCount, overlap: reading.overlap,
+  ok: reading.ok,
+  rows: reading.rows,
+  firstAt: isoOrNull(reading.firstUtcMs),
+  lastAt: isoOrNull(reading.lastUtcMs),
+  medianIntervalS: reading.medianIntervalS,
+  problems: reading.problems,
+  problemCount: reading.problemCount,
+  overlap: reading.overlap,
 });

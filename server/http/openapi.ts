@@ -25,7 +25,12 @@ class Components {
     const rename = (value: unknown): unknown => {
       if (Array.isArray(value)) return value.map(rename);
       if (typeof value !== 'object' || value === null) return value;
-      return Object.fromEntries(Object.entries(value).map(([key, inner]) => [key, key === '$ref' && typeof inner === 'string' ? `#/components/schemas/${nameOf(inner.replace('#/$defs/', ''))}` : rename(inner)]));
+      return Object.fromEntries(
+        Object.entries(value).map(([key, inner]) => [
+          key,
+          key === '$ref' && typeof inner === 'string' ? `#/components/schemas/${nameOf(inner.replace('#/$defs/', ''))}` : rename(inner),
+        ]),
+      );
     };
     for (const [part, definition] of Object.entries(($defs ?? {}) as Record<string, Json>)) {
       delete definition.id;
@@ -49,11 +54,21 @@ export function openApiOf(contracts: readonly RouteContract[], version: string):
   }
   return {
     openapi: '3.1.0',
-    info: { title: 'Evenfall', version, summary: 'Plan, run and prove a measurement of gravity with a torsion balance.', license: { name: 'MIT', identifier: 'MIT' } },
+    info: {
+      title: 'Evenfall',
+      version,
+      summary: 'Plan, run and prove a measurement of gravity with a torsion balance.',
+      license: { name: 'MIT', identifier: 'MIT' },
+    },
     jsonSchemaDialect: 'https://json-schema.org/draft/2020-12/schema',
     servers: [{ url: '/' }],
     paths,
-    components: { schemas: components.schemas, securitySchemes: { session: { type: 'apiKey', in: 'cookie', name: 'ef', description: '`__Host-ef` where the server is reached over TLS.' } } },
+    components: {
+      schemas: components.schemas,
+      securitySchemes: {
+        session: { type: 'apiKey', in: 'cookie', name: 'ef', description: '`__Host-ef` where the server is reached over TLS.' },
+      },
+    },
   };
 }
 
@@ -72,20 +87,53 @@ function operationOf(contract: RouteContract, components: Components): Json {
 }
 
 function parametersOf(contract: RouteContract, components: Components): Json[] {
-  const inPath = [...contract.path.matchAll(/:(\w+)/g)].map(([, name]) => ({ name, in: 'path', required: true, schema: { type: 'string' } }));
+  const inPath = [...contract.path.matchAll(/:(\w+)/g)].map(([, name]) => ({
+    name,
+    in: 'path',
+    required: true,
+    schema: { type: 'string' },
+  }));
   const query = contract.query === undefined ? {} : components.add(`${contract.name}.query`, contract.query, 'input');
   const required = new Set((query.required ?? []) as string[]);
-  const inQuery = Object.entries((query.properties ?? {}) as Json).map(([name, schema]) => ({ name, in: 'query', required: required.has(name), schema }));
+  const inQuery = Object.entries((query.properties ?? {}) as Json).map(([name, schema]) => ({
+    name,
+    in: 'query',
+    required: required.has(name),
+    schema,
+  }));
   const headers = [
-    ...(contract.idempotent === true ? [{ name: 'Idempotency-Key', in: 'header', required: true, description: 'New for each command, the same for each repeat of it.', schema: { type: 'string', minLength: 1, maxLength: 128 } }] : []),
-    ...(contract.etag === 'required' ? [{ name: 'If-Match', in: 'header', required: true, description: 'ETag of the version edited.', schema: { type: 'string' } }] : []),
-    ...(contract.produces === 'text/event-stream' ? [{ name: 'Last-Event-ID', in: 'header', required: false, description: 'The stream continues after this event.', schema: { type: 'string' } }] : []),
+    ...(contract.idempotent === true
+      ? [
+          {
+            name: 'Idempotency-Key',
+            in: 'header',
+            required: true,
+            description: 'New for each command, the same for each repeat of it.',
+            schema: { type: 'string', minLength: 1, maxLength: 128 },
+          },
+        ]
+      : []),
+    ...(contract.etag === 'required'
+      ? [{ name: 'If-Match', in: 'header', required: true, description: 'ETag of the version edited.', schema: { type: 'string' } }]
+      : []),
+    ...(contract.produces === 'text/event-stream'
+      ? [
+          {
+            name: 'Last-Event-ID',
+            in: 'header',
+            required: false,
+            description: 'The stream continues after this event.',
+            schema: { type: 'string' },
+          },
+        ]
+      : []),
   ];
   return [...inPath, ...inQuery, ...headers];
 }
 
 function requestBodyOf(contract: RouteContract, components: Components): Json | null {
-  if (contract.consumes !== undefined) return { required: true, content: { [contract.consumes]: { schema: { type: 'string', format: 'binary' } } } };
+  if (contract.consumes !== undefined)
+    return { required: true, content: { [contract.consumes]: { schema: { type: 'string', format: 'binary' } } } };
   if (contract.body === undefined) return null;
   const schema = components.add(`${contract.name}.body`, contract.body, 'input');
   return { required: Array.isArray(schema.required) && schema.required.length > 0, content: { 'application/json': { schema } } };
@@ -93,13 +141,21 @@ function requestBodyOf(contract: RouteContract, components: Components): Json | 
 
 function responsesOf(contract: RouteContract, components: Components): Json {
   const media = contract.produces ?? 'application/json';
-  const schema = contract.response === undefined ? (media === 'application/json' ? {} : { type: 'string' }) : components.add(`${contract.name}.response`, contract.response, 'output');
+  const schema =
+    contract.response === undefined
+      ? media === 'application/json'
+        ? {}
+        : { type: 'string' }
+      : components.add(`${contract.name}.response`, contract.response, 'output');
   const success = contract.status === 204 ? { description: 'Done' } : { description: contract.summary, content: { [media]: { schema } } };
   const responses: Json = { [contract.status]: success };
   for (const code of everyProblemOf(contract)) {
     const status = String(problemCodes[code]);
     const before = responses[status] as { description: string } | undefined;
-    responses[status] = { description: before === undefined ? code : `${before.description}, ${code}`, content: { 'application/problem+json': { schema: { $ref: '#/components/schemas/Problem' } } } };
+    responses[status] = {
+      description: before === undefined ? code : `${before.description}, ${code}`,
+      content: { 'application/problem+json': { schema: { $ref: '#/components/schemas/Problem' } } },
+    };
   }
   return responses;
 }

@@ -62,4 +62,5 @@ export function problemOf(error: ProblemError, instance: string): Problem {
   };
 }
 
-export const notFound = (what: string): ProblemError => new ProblemError('not-found', `There is no ${what} with this id in this lab, or it is not yours to see.`);
+export const notFound = (what: string): ProblemError =>
+  new ProblemError('not-found', `There is no ${what} with this id in this lab, or it is not yours to see.`);

@@ -14,10 +14,12 @@ export function problemPages(): Router {
       return;
     }
     const title = problemTitles[code];
-    res.type('html').send(
-      `<!doctype html><html lang="en"><head><meta charset="utf-8"><meta name="viewport" content="width=device-width"><title>${title}</title></head>` +
-        `<body><h1>${title}</h1><p>Problem code <code>${code}</code>, HTTP status ${String(problemCodes[code])}. The answer's <code>detail</code> says what is wrong, where, and what would be right.</p></body></html>`,
-    );
+    res
+      .type('html')
+      .send(
+        `<!doctype html><html lang="en"><head><meta charset="utf-8"><meta name="viewport" content="width=device-width"><title>${title}</title></head>` +
+          `<body><h1>${title}</h1><p>Problem code <code>${code}</code>, HTTP status ${String(problemCodes[code])}. The answer's <code>detail</code> says what is wrong, where, and what would be right.</p></body></html>`,
+      );
   });
   return router;
 }

@@ -10,7 +10,12 @@ export function limitRate(perMinute: number): RequestHandler {
     standardHeaders: 'draft-8',
     legacyHeaders: false,
     handler: (_req, _res, next) => {
-      next(new ProblemError('too-many-requests', `More than ${String(perMinute)} requests came from your address within a minute. Wait a minute and try again.`));
+      next(
+        new ProblemError(
+          'too-many-requests',
+          `More than ${String(perMinute)} requests came from your address within a minute. Wait a minute and try again.`,
+        ),
+      );
     },
   });
 }

@@ -13,5 +13,9 @@ export function refusalOf(findings: readonly FindingLike[]): ProblemError | null
   const code = findings.every((finding) => finding.code === 'not-yet') ? 'not-yet' : 'protocol-refused';
   const where = first.path === null ? '' : `Step ${first.path}: `;
   const more = findings.length > 1 ? ` There are ${String(findings.length - 1)} more; each stands under errors.` : '';
-  return new ProblemError(code, `${where}${first.message}${more}`, findings.map((finding) => ({ path: finding.path ?? '', message: finding.message, code: finding.code })));
+  return new ProblemError(
+    code,
+    `${where}${first.message}${more}`,
+    findings.map((finding) => ({ path: finding.path ?? '', message: finding.message, code: finding.code })),
+  );
 }

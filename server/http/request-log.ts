@@ -15,7 +15,16 @@ export function logRequests(services: Pick<Services, 'log' | 'clock' | 'newId'>)
     res.once('finish', () => {
       if (!req.originalUrl.startsWith('/api/')) return;
       const route: unknown = (req as { route?: { path?: unknown } }).route?.path;
-      services.log.info({ requestId: requestIdOf(res), method: req.method, route: typeof route === 'string' ? route : null, status: res.statusCode, ms: Math.round(services.clock.monotonicMs() - startMs) }, 'answered');
+      services.log.info(
+        {
+          requestId: requestIdOf(res),
+          method: req.method,
+          route: typeof route === 'string' ? route : null,
+          status: res.statusCode,
+          ms: Math.round(services.clock.monotonicMs() - startMs),
+        },
+        'answered',
+      );
     });
     next();
   };

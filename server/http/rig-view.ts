@@ -7,11 +7,20 @@ import { isoOf, isoOrNull } from './maker';
 import type { Services } from './services';
 
 /** The live state of a rig's line and turntable; what the line has not told is null. */
-export function rigLiveOf(station: RigStation | null): RigLive {
+function rigLiveOf(station: RigStation | null): RigLive {
   if (station === null)
     return {
-      condition: 'closed', detail: 'this server does not drive the rig', lastReplyAt: null, roundTripMs: null, discardedLines: 0, positionKnown: false, angleDeg: null, moving: false, interlockClosed: null,
-      supplyPresent: null, driversOn: null,
+      condition: 'closed',
+      detail: 'this server does not drive the rig',
+      lastReplyAt: null,
+      roundTripMs: null,
+      discardedLines: 0,
+      positionKnown: false,
+      angleDeg: null,
+      moving: false,
+      interlockClosed: null,
+      supplyPresent: null,
+      driversOn: null,
     };
   const health = station.link.health();
   const controller = station.link.controller();
@@ -30,7 +39,13 @@ export function rigLiveOf(station: RigStation | null): RigLive {
   };
 }
 
-export const armViewOf = (arm: StandingArm): ArmView => ({ id: arm.id, name: arm.name, from: isoOf(arm.fromUtcMs), until: isoOf(arm.untilUtcMs), note: arm.note });
+export const armViewOf = (arm: StandingArm): ArmView => ({
+  id: arm.id,
+  name: arm.name,
+  from: isoOf(arm.fromUtcMs),
+  until: isoOf(arm.untilUtcMs),
+  note: arm.note,
+});
 
 export function rigSummaryOf(services: Services, rig: RigRecord, run: RunListRow | undefined): RigSummary {
   const arm = services.arms.armOf(rig.id);
@@ -41,7 +56,10 @@ export function rigSummaryOf(services: Services, rig: RigRecord, run: RunListRow
     link: rig.link,
     live: rigLiveOf(services.stations.get(rig.id)),
     arm: arm === null ? null : armViewOf(arm),
-    activeRun: run === undefined ? null : { id: run.id, state: services.supervisor.activeOf(rig.id)?.facts().state ?? run.state, protocolName: run.protocolName },
+    activeRun:
+      run === undefined
+        ? null
+        : { id: run.id, state: services.supervisor.activeOf(rig.id)?.facts().state ?? run.state, protocolName: run.protocolName },
   };
 }
 

@@ -23,7 +23,8 @@ export interface Membership {
   role: Role;
 }
 
-type ParsedOf<R extends RouteContract, K extends 'query' | 'body'> = R extends Record<K, infer S extends z.ZodType> ? z.output<S> : undefined;
+type ParsedOf<R extends RouteContract, K extends 'query' | 'body'> =
+  R extends Record<K, infer S extends z.ZodType> ? z.output<S> : undefined;
 
 export interface RouteContext<R extends RouteContract = RouteContract> {
   params: ParamsOf<R>;

@@ -9,8 +9,19 @@ import type { Services } from './services';
 /** What a list shows of a run. */
 export function runSummaryOf(row: RunListRow): RunSummary {
   return {
-    id: row.id, rigId: row.rigId, rigName: row.rigName, protocolId: row.protocolId, protocolName: row.protocolName, protocolRevision: row.protocolRevision, state: row.state, rehearsal: row.rehearsal,
-    operator: row.operator, createdAt: isoOf(row.createdAt), startedAt: isoOrNull(row.startedAt), endedAt: isoOrNull(row.endedAt), predictedEndAt: isoOrNull(row.predictedEndAt),
+    id: row.id,
+    rigId: row.rigId,
+    rigName: row.rigName,
+    protocolId: row.protocolId,
+    protocolName: row.protocolName,
+    protocolRevision: row.protocolRevision,
+    state: row.state,
+    rehearsal: row.rehearsal,
+    operator: row.operator,
+    createdAt: isoOf(row.createdAt),
+    startedAt: isoOrNull(row.startedAt),
+    endedAt: isoOrNull(row.endedAt),
+    predictedEndAt: isoOrNull(row.predictedEndAt),
   };
 }
 
@@ -39,12 +50,18 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
     intervention:
       facts.intervention === null
         ? null
-        : { kind: facts.intervention.kind, by: facts.intervention.by, serverAt: isoOf(facts.intervention.serverAtUtcMs), confirmedAt: isoOrNull(facts.intervention.confirmedAtUtcMs) },
+        : {
+            kind: facts.intervention.kind,
+            by: facts.intervention.by,
+            serverAt: isoOf(facts.intervention.serverAtUtcMs),
+            confirmedAt: isoOrNull(facts.intervention.confirmedAtUtcMs),
+          },
     mayResume: facts.mayResume,
     lastSeq: facts.lastSeq,
     rig: start.rig,
     protocol: start.protocol,
-    simulated: start.simulated === null ? null : { trueG: start.simulated.trueG, seed: start.simulated.seed, rateHz: start.simulated.rateHz },
+    simulated:
+      start.simulated === null ? null : { trueG: start.simulated.trueG, seed: start.simulated.seed, rateHz: start.simulated.rateHz },
   };
 }
 
@@ -52,7 +69,15 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
   const dwellsPlanned = plannedDwells(run.start, run.startedAt ?? run.createdAt);
   const snapshot = run.chartVersion === CHART_VERSION ? (run.snapshot as RunSnapshot | null) : null;
   if (snapshot !== null)
-    return factsOf({ start: run.start, snapshot, nowUtcMs: services.clock.utcMs(), arm: null, lastSeq: run.lastSeq, predictedEndUtcMs: run.predictedEndAt, dwellsPlanned });
+    return factsOf({
+      start: run.start,
+      snapshot,
+      nowUtcMs: services.clock.utcMs(),
+      arm: null,
+      lastSeq: run.lastSeq,
+      predictedEndUtcMs: run.predictedEndAt,
+      dwellsPlanned,
+    });
   const steps = await readSteps(services.database.db, run.labId, run.id);
   return {
     runId: run.id,

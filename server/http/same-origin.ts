@@ -15,5 +15,8 @@ export function assertSameOrigin(req: Request, config: ServerConfig): void {
   const own = config.publicUrl ?? `${req.protocol}://${req.headers.host ?? ''}`;
   if (site === undefined && req.headers.origin === own) return;
   const came = site === undefined ? (req.headers.origin ?? 'neither Sec-Fetch-Site nor Origin') : `Sec-Fetch-Site ${String(site)}`;
-  throw new ProblemError('cross-site', `A request that changes something must come from ${own} itself; this one came with ${came}. A program sets the header Origin to ${own}.`);
+  throw new ProblemError(
+    'cross-site',
+    `A request that changes something must come from ${own} itself; this one came with ${came}. A program sets the header Origin to ${own}.`,
+  );
 }

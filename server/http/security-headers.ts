@@ -15,7 +15,7 @@ function inlineTexts(html: string, element: 'style' | 'script'): string[] {
  * The content security policy for the built page: nothing inline but what the build itself wrote, by hash. The hash
  * of the empty text lets react-native-web make its style element, which it then fills through the CSSOM.
  */
-export function contentSecurityPolicy(indexHtml: string): Record<string, string[]> {
+function contentSecurityPolicy(indexHtml: string): Record<string, string[]> {
   return {
     'default-src': ["'self'"],
     'script-src': ["'self'", ...inlineTexts(indexHtml, 'script').map(hashOf)],

@@ -9,7 +9,10 @@ const cookieName = (config: ServerConfig) => (overTls(config) ? '__Host-ef' : 'e
 /** Session token of a request, or null. */
 export function readSessionToken(req: Request, config: ServerConfig): string | null {
   const wanted = `${cookieName(config)}=`;
-  const part = (req.headers.cookie ?? '').split(';').map((text) => text.trim()).find((text) => text.startsWith(wanted));
+  const part = (req.headers.cookie ?? '')
+    .split(';')
+    .map((text) => text.trim())
+    .find((text) => text.startsWith(wanted));
   const token = part?.slice(wanted.length) ?? '';
   return /^[\w.~-]{16,256}$/.test(token) ? token : null;
 }

@@ -29,7 +29,11 @@ export interface StartReport {
 /** Deflection older than this means that nothing is arriving. */
 const freshMs = 60_000;
 
-const check = (code: string, title: string, outcome: { state: StartCheck['state']; detail: string }): StartCheck => ({ code, title, ...outcome });
+const check = (code: string, title: string, outcome: { state: StartCheck['state']; detail: string }): StartCheck => ({
+  code,
+  title,
+  ...outcome,
+});
 const pass = (detail: string) => ({ state: 'pass' as const, detail });
 const fail = (detail: string) => ({ state: 'fail' as const, detail });
 const note = (detail: string) => ({ state: 'note' as const, detail });
@@ -39,14 +43,33 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
   const station = services.stations.get(plan.rig.id);
   const nowUtcMs = services.clock.utcMs();
   const fromDeg = station?.link.controller()?.angleDeg ?? plan.document.motion?.homeDeg ?? 0;
-  const timeline = planTimeline({ protocol: plan.protocol, rig: plan.document, timeZone: plan.timeZone }, { utcMs: nowUtcMs, angleDeg: fromDeg });
+  const timeline = planTimeline(
+    { protocol: plan.protocol, rig: plan.document, timeZone: plan.timeZone },
+    { utcMs: nowUtcMs, angleDeg: fromDeg },
+  );
   const runs = await activeRuns(services.database.db, plan.rig.labId);
   const controller = station?.link.controller() ?? null;
   const checks = [
     check('link', 'Link to the controller', linkCheck(station)),
     check('homed', 'Position', homedCheck(plan, controller)),
-    check('interlock', 'Interlock', controller === null ? fail('Not known: the controller has not answered.') : controller.interlockClosed ? pass('Closed.') : fail('Open: close the door of the room or the guard.')),
-    check('supply', 'Motor supply', controller === null ? fail('Not known: the controller has not answered.') : controller.supplyPresent ? pass('Present.') : fail('Off: switch it on at the rig.')),
+    check(
+      'interlock',
+      'Interlock',
+      controller === null
+        ? fail('Not known: the controller has not answered.')
+        : controller.interlockClosed
+          ? pass('Closed.')
+          : fail('Open: close the door of the room or the guard.'),
+    ),
+    check(
+      'supply',
+      'Motor supply',
+      controller === null
+        ? fail('Not known: the controller has not answered.')
+        : controller.supplyPresent
+          ? pass('Present.')
+          : fail('Off: switch it on at the rig.'),
+    ),
     check('still', 'Turntable', controller?.moving === true ? fail('It is moving: wait until it stands still.') : pass('Stands still.')),
     check('protocol', 'Protocol on this rig', protocolCheck(plan)),
     check('data', 'Deflection', await dataCheck(services, station, nowUtcMs)),
@@ -73,7 +96,9 @@ function homedCheck({ protocol }: StartPlan, controller: { positionKnown: boolea
   if (controller === null) return fail('Not known: the controller has not answered.');
   if (controller.positionKnown) return pass(controller.angleDeg === null ? 'Known.' : `Known: ${formatDegrees(controller.angleDeg)}.`);
   const first = protocol.steps[0]?.kind;
-  return first === 'home' ? note('Not known; the protocol homes first.') : fail('Not known, and the protocol does not begin with home. Put a home step first.');
+  return first === 'home'
+    ? note('Not known; the protocol homes first.')
+    : fail('Not known, and the protocol does not begin with home. Put a home step first.');
 }
 
 function protocolCheck({ protocol, document }: StartPlan) {
@@ -88,7 +113,11 @@ async function dataCheck(services: Services, station: RigStation | null, nowUtcM
   if (station?.channel == null) return note('No deflection arrives by itself on this rig: bring the file in after the run.');
   const last = await lastSampleUtcMs(services.database, { labId: station.labId, channelId: station.channel.id });
   if (last !== null && nowUtcMs - last <= freshMs) return pass(`The channel ${station.channel.name} is being filled.`);
-  return fail(last === null ? `The channel ${station.channel.name} has no sample yet.` : `The channel ${station.channel.name} has had no sample for ${String(Math.round((nowUtcMs - last) / 1000))} s.`);
+  return fail(
+    last === null
+      ? `The channel ${station.channel.name} has no sample yet.`
+      : `The channel ${station.channel.name} has had no sample for ${String(Math.round((nowUtcMs - last) / 1000))} s.`,
+  );
 }
 
 function freeCheck(services: Services, rigId: string, run: RunListRow | undefined) {
@@ -98,14 +127,17 @@ function freeCheck(services: Services, rigId: string, run: RunListRow | undefine
 }
 
 /** Names the run that has the rig. */
-export const busyWords = (run: RunListRow): string => `The run "${run.protocolName}" (${run.id}), started by ${run.operator}, is ${run.state}. Wait for its end, or stop it.`;
+export const busyWords = (run: RunListRow): string =>
+  `The run "${run.protocolName}" (${run.id}), started by ${run.operator}, is ${run.state}. Wait for its end, or stop it.`;
 
 function armedCheck(services: Services, { rig, timeZone }: StartPlan, timeline: Timeline) {
   const arm = services.arms.armOf(rig.id);
   if (arm === null) return fail('Nobody on site answers for the rig: arm it there first.');
   const until = formatDayAndClock(arm.untilUtcMs, timeZone);
   if (arm.untilUtcMs > timeline.endUtcMs) return pass(`By ${arm.name} until ${until}.`);
-  return fail(`${arm.name} answers for it until ${until}, but the run would finish at ${formatDayAndClock(timeline.endUtcMs, timeZone)}: arm it for longer.`);
+  return fail(
+    `${arm.name} answers for it until ${until}, but the run would finish at ${formatDayAndClock(timeline.endUtcMs, timeZone)}: arm it for longer.`,
+  );
 }
 
 function cautionsCheck(services: Services, { rig }: StartPlan) {

@@ -21,7 +21,11 @@ function setCaching(res: Response, path: string): void {
 export function webFiles(webDir: string | null, indexHtml: string): Router {
   const router = Router();
   if (webDir !== null) {
-    for (const folder of ['/_expo', '/assets']) router.use(folder, express.static(join(webDir, folder), { fallthrough: false, index: false, redirect: false, setHeaders: setCaching }));
+    for (const folder of ['/_expo', '/assets'])
+      router.use(
+        folder,
+        express.static(join(webDir, folder), { fallthrough: false, index: false, redirect: false, setHeaders: setCaching }),
+      );
     router.use(express.static(webDir, { index: false, redirect: false, setHeaders: setCaching }));
   }
   router.get('/{*rest}', (_req, res) => {

@@ -23,7 +23,10 @@ export function sniffCsv(head: Uint8Array, whole: boolean): ImportPreview {
   const text = decode(head, whole);
   const best = delimiters.map((delimiter) => tableOf(text, delimiter)).sort((a, b) => b.score - a.score);
   const [table, second] = best as [Table, Table];
-  if (table.columns < 2) throw new UnreadableFile('No table was found: a row needs at least two columns, a time and a value, parted by a comma, semicolon, tab, bar or space.');
+  if (table.columns < 2)
+    throw new UnreadableFile(
+      'No table was found: a row needs at least two columns, a time and a value, parted by a comma, semicolon, tab, bar or space.',
+    );
   const ambiguous = new Set<keyof ImportMapping>();
   if (second.columns >= 2 && second.score === table.score) ambiguous.add('delimiter');
   const decimal = decimalOf(table, ambiguous);
@@ -36,9 +39,21 @@ export function sniffCsv(head: Uint8Array, whole: boolean): ImportPreview {
   const valueColumn = valueColumnOf(data, timeColumn, ambiguous);
   const unit = unitOf(header[valueColumn] ?? '');
   if (unit === null) ambiguous.add('unit');
-  const mapping: ImportMapping = { delimiter: table.delimiter, decimal, headerRow, timeColumn, timeFormat: time, valueColumn, unit: unit ?? 'rad' };
+  const mapping: ImportMapping = {
+    delimiter: table.delimiter,
+    decimal,
+    headerRow,
+    timeColumn,
+    timeFormat: time,
+    valueColumn,
+    unit: unit ?? 'rad',
+  };
   return {
-    columns: Array.from({ length: table.columns }, (_, index) => ({ index, name: header[index]?.trim() || `column ${String(index + 1)}`, sample: data.rows[0]?.[index] ?? '' })),
+    columns: Array.from({ length: table.columns }, (_, index) => ({
+      index,
+      name: header[index]?.trim() || `column ${String(index + 1)}`,
+      sample: data.rows[0]?.[index] ?? '',
+    })),
     rows: table.rows.slice(0, rowsShown),
     mapping,
     ambiguous: [...ambiguous],
@@ -47,7 +62,8 @@ export function sniffCsv(head: Uint8Array, whole: boolean): ImportPreview {
 
 function decode(head: Uint8Array, whole: boolean): string {
   if (head.length === 0) throw new UnreadableFile('The file is empty.');
-  if ((head[0] === 0xff && head[1] === 0xfe) || (head[0] === 0xfe && head[1] === 0xff)) throw new UnreadableFile('The file is UTF-16; save it as UTF-8 text.');
+  if ((head[0] === 0xff && head[1] === 0xfe) || (head[0] === 0xfe && head[1] === 0xff))
+    throw new UnreadableFile('The file is UTF-16; save it as UTF-8 text.');
   if (head.includes(0)) throw new UnreadableFile('The file is not text: it holds zero bytes. A spreadsheet must be saved as CSV first.');
   try {
     return new TextDecoder('utf-8', { fatal: true }).decode(head, { stream: !whole });
@@ -65,7 +81,19 @@ interface Table {
 }
 
 function tableOf(text: string, delimiter: Table['delimiter']): Table {
-  const rows: string[][] = parse(text, { bom: true, delimiter, to: rowsRead, relax_column_count: true, relax_quotes: true, skip_empty_lines: true, comment: '#', comment_no_infix: true, trim: true, ignore_last_delimiters: false, skip_records_with_error: true });
+  const rows: string[][] = parse(text, {
+    bom: true,
+    delimiter,
+    to: rowsRead,
+    relax_column_count: true,
+    relax_quotes: true,
+    skip_empty_lines: true,
+    comment: '#',
+    comment_no_infix: true,
+    trim: true,
+    ignore_last_delimiters: false,
+    skip_records_with_error: true,
+  });
   const counts = new Map<number, number>();
   for (const row of rows) counts.set(row.length, (counts.get(row.length) ?? 0) + 1);
   const columns = [...counts].sort((a, b) => b[1] - a[1])[0]?.[0] ?? 0;
@@ -73,7 +101,8 @@ function tableOf(text: string, delimiter: Table['delimiter']): Table {
   return { delimiter, rows, columns, score: columns < 2 ? 0 : readable / Math.max(1, rows.length) };
 }
 
-const isReadable = (field: string) => field === '' || isNumber(field, '.') || isNumber(field, ',') || looksIso(field) || looksLocalDate(field) || /^nan$/i.test(field);
+const isReadable = (field: string) =>
+  field === '' || isNumber(field, '.') || isNumber(field, ',') || looksIso(field) || looksLocalDate(field) || /^nan$/i.test(field);
 
 /** Comma fields that could as well be thousands (1,234) decide nothing. */
 function decimalOf(table: Table, ambiguous: Set<keyof ImportMapping>): ImportMapping['decimal'] {
@@ -85,9 +114,11 @@ function decimalOf(table: Table, ambiguous: Set<keyof ImportMapping>): ImportMap
   return ',';
 }
 
-const isData = (field: string, decimal: ImportMapping['decimal']) => isNumber(field, decimal) || looksIso(field) || looksLocalDate(field) || field === '';
+const isData = (field: string, decimal: ImportMapping['decimal']) =>
+  isNumber(field, decimal) || looksIso(field) || looksLocalDate(field) || field === '';
 
-const hasHeader = (table: Table, decimal: ImportMapping['decimal']) => table.rows.length > 0 && !(table.rows[0] ?? []).every((field) => isData(field, decimal) || /^nan$/i.test(field));
+const hasHeader = (table: Table, decimal: ImportMapping['decimal']) =>
+  table.rows.length > 0 && !(table.rows[0] ?? []).every((field) => isData(field, decimal) || /^nan$/i.test(field));
 
 interface Data {
   rows: string[][];
@@ -103,7 +134,9 @@ function timeColumnOf(data: Data, ambiguous: Set<keyof ImportMapping>): number {
   const dated = indices.filter((index) => columnOf(data, index).some((field) => looksIso(field) || looksLocalDate(field)));
   if (dated.length === 1) return dated[0] as number;
   const among = dated.length > 0 ? dated : indices;
-  const named = among.filter((index) => /(^|[^a-z])(time|utc|epoch|timestamp|date|elapsed|t|sec|seconds)([^a-z]|$)/i.test(data.header[index] ?? ''));
+  const named = among.filter((index) =>
+    /(^|[^a-z])(time|utc|epoch|timestamp|date|elapsed|t|sec|seconds)([^a-z]|$)/i.test(data.header[index] ?? ''),
+  );
   if (named.length === 1) return named[0] as number;
   const rising = among.filter((index) => rises(columnOf(data, index), data.decimal));
   if (rising.length === 1) return rising[0] as number;
@@ -113,7 +146,11 @@ function timeColumnOf(data: Data, ambiguous: Set<keyof ImportMapping>): number {
 
 function rises(fields: string[], decimal: ImportMapping['decimal']): boolean {
   const values = fields.filter((field) => isNumber(field, decimal)).map((field) => Number(field.replace(',', '.')));
-  return values.length >= 2 && values.length === fields.length && values.every((value, index) => index === 0 || value > (values[index - 1] as number));
+  return (
+    values.length >= 2 &&
+    values.length === fields.length &&
+    values.every((value, index) => index === 0 || value > (values[index - 1] as number))
+  );
 }
 
 function timeFormatOf(data: Data, timeColumn: number, ambiguous: Set<keyof ImportMapping>): ImportMapping['timeFormat'] {
@@ -133,7 +170,9 @@ function timeFormatOf(data: Data, timeColumn: number, ambiguous: Set<keyof Impor
 }
 
 function valueColumnOf(data: Data, timeColumn: number, ambiguous: Set<keyof ImportMapping>): number {
-  const numeric = Array.from({ length: data.columns }, (_, index) => index).filter((index) => index !== timeColumn && columnOf(data, index).some((field) => isNumber(field, data.decimal)));
+  const numeric = Array.from({ length: data.columns }, (_, index) => index).filter(
+    (index) => index !== timeColumn && columnOf(data, index).some((field) => isNumber(field, data.decimal)),
+  );
   if (numeric.length === 1) return numeric[0] as number;
   const named = numeric.filter((index) => /deflection|theta|angle|spot|position/i.test(data.header[index] ?? ''));
   if (named.length === 1) return named[0] as number;

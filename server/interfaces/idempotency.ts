@@ -22,4 +22,5 @@ export interface IdempotencyAnswer {
   etag: string | null;
 }
 
-export type IdempotencyState = { kind: 'new' } | { kind: 'running' } | { kind: 'other-request' } | { kind: 'answered'; answer: IdempotencyAnswer };
+export type IdempotencyState =
+  { kind: 'new' } | { kind: 'running' } | { kind: 'other-request' } | { kind: 'answered'; answer: IdempotencyAnswer };

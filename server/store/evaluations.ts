@@ -15,9 +15,17 @@ export interface EvaluationJob {
 }
 
 /** Adds an evaluation and the job that works it off, both or neither. */
-export function queueEvaluation(db: Database, evaluation: { labId: string; runId: string; channel: string | null; createdAt: number; createdBy: string }): Promise<EvaluationRecord> {
+export function queueEvaluation(
+  db: Database,
+  evaluation: { labId: string; runId: string; channel: string | null; createdAt: number; createdBy: string },
+): Promise<EvaluationRecord> {
   return db.transaction(async (tx) => {
-    const row = one(await tx.insert(evaluations).values({ ...evaluation, state: 'queued' }).returning());
+    const row = one(
+      await tx
+        .insert(evaluations)
+        .values({ ...evaluation, state: 'queued' })
+        .returning(),
+    );
     const payload: EvaluationJob = { labId: row.labId, evaluationId: row.id };
     await enqueueJob(tx, { kind: evaluationJobKind, payload, labId: row.labId, nowUtcMs: evaluation.createdAt, maxAttempts: 3 });
     return row;
@@ -26,23 +34,42 @@ export function queueEvaluation(db: Database, evaluation: { labId: string; runId
 
 /** Evaluations of a run, newest first, without their curves. */
 export async function listEvaluations(db: Handle, labId: string, runId: string): Promise<Omit<EvaluationRecord, 'curves'>[]> {
-  return db.select(listColumns).from(evaluations).where(and(eq(evaluations.labId, labId), eq(evaluations.runId, runId))).orderBy(desc(evaluations.createdAt), desc(evaluations.id));
+  return db
+    .select(listColumns)
+    .from(evaluations)
+    .where(and(eq(evaluations.labId, labId), eq(evaluations.runId, runId)))
+    .orderBy(desc(evaluations.createdAt), desc(evaluations.id));
 }
 
 const listColumns = {
-  labId: evaluations.labId, id: evaluations.id, runId: evaluations.runId, state: evaluations.state, channel: evaluations.channel, createdAt: evaluations.createdAt, createdBy: evaluations.createdBy,
-  finishedAt: evaluations.finishedAt, error: evaluations.error, result: evaluations.result,
+  labId: evaluations.labId,
+  id: evaluations.id,
+  runId: evaluations.runId,
+  state: evaluations.state,
+  channel: evaluations.channel,
+  createdAt: evaluations.createdAt,
+  createdBy: evaluations.createdBy,
+  finishedAt: evaluations.finishedAt,
+  error: evaluations.error,
+  result: evaluations.result,
 };
 
 export async function findEvaluation(db: Handle, labId: string, evaluationId: string): Promise<EvaluationRecord | null> {
-  const [found] = await db.select().from(evaluations).where(and(eq(evaluations.labId, labId), eq(evaluations.id, evaluationId)));
+  const [found] = await db
+    .select()
+    .from(evaluations)
+    .where(and(eq(evaluations.labId, labId), eq(evaluations.id, evaluationId)));
   return found ?? null;
 }
 
 /** Marks an evaluation as being worked on; null where it is over already. */
 export async function beginEvaluation(db: Handle, job: EvaluationJob): Promise<EvaluationRecord | null> {
   const open = inArray(evaluations.state, ['queued', 'running']);
-  const [row] = await db.update(evaluations).set({ state: 'running' }).where(and(eq(evaluations.labId, job.labId), eq(evaluations.id, job.evaluationId), open)).returning();
+  const [row] = await db
+    .update(evaluations)
+    .set({ state: 'running' })
+    .where(and(eq(evaluations.labId, job.labId), eq(evaluations.id, job.evaluationId), open))
+    .returning();
   return row ?? null;
 }
 
@@ -50,5 +77,8 @@ export type EvaluationEnd = { result: EvaluationResult; curves: FitCurve[]; chan
 
 export async function endEvaluation(db: Handle, job: EvaluationJob, end: EvaluationEnd & { finishedAt: number }): Promise<void> {
   const state = 'error' in end ? 'failed' : 'done';
-  await db.update(evaluations).set({ ...end, state }).where(and(eq(evaluations.labId, job.labId), eq(evaluations.id, job.evaluationId)));
+  await db
+    .update(evaluations)
+    .set({ ...end, state })
+    .where(and(eq(evaluations.labId, job.labId), eq(evaluations.id, job.evaluationId)));
 }

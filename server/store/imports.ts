@@ -13,12 +13,23 @@ export type ChannelRecord = typeof channels.$inferSelect;
 
 const pieceBytes = 1_048_576;
 
-export async function beginImport(db: Handle, file: { labId: string; runId: string; fileName: string; createdAt: number; createdBy: string }): Promise<ImportRecord> {
-  return one(await db.insert(imports).values({ ...file, state: 'waiting' }).returning());
+export async function beginImport(
+  db: Handle,
+  file: { labId: string; runId: string; fileName: string; createdAt: number; createdBy: string },
+): Promise<ImportRecord> {
+  return one(
+    await db
+      .insert(imports)
+      .values({ ...file, state: 'waiting' })
+      .returning(),
+  );
 }
 
 export async function findImport(db: Handle, labId: string, importId: string): Promise<ImportRecord | null> {
-  const [found] = await db.select().from(imports).where(and(eq(imports.labId, labId), eq(imports.id, importId)));
+  const [found] = await db
+    .select()
+    .from(imports)
+    .where(and(eq(imports.labId, labId), eq(imports.id, importId)));
   return found ?? null;
 }
 
@@ -37,7 +48,7 @@ export async function keepPieces(db: Handle, key: { labId: string; importId: str
     pendingBytes = 0;
   };
   for await (const chunk of chunks) {
-    for (let from = 0; from < chunk.length; ) {
+    for (let from = 0; from < chunk.length;) {
       const part = chunk.subarray(from, from + pieceBytes - pendingBytes);
       pending.push(part);
       pendingBytes += part.length;
@@ -72,7 +83,10 @@ export type ImportChange = Partial<Pick<ImportRecord, 'state' | 'bytes' | 'sha25
 };
 
 export async function changeImport(db: Handle, key: { labId: string; importId: string }, change: ImportChange): Promise<void> {
-  await db.update(imports).set(change).where(and(eq(imports.labId, key.labId), eq(imports.id, key.importId)));
+  await db
+    .update(imports)
+    .set(change)
+    .where(and(eq(imports.labId, key.labId), eq(imports.id, key.importId)));
 }
 
 /** The samples of the file hold other values than the channel at the same instants. */
@@ -105,7 +119,11 @@ export function storeImport(
   const { labId, importId, channel: wanted, ...change } = work;
   return connection.bulk(async (client, handle) => {
     // Two who commit the same import: the second waits here and then finds it stored.
-    await handle.select({ id: imports.id }).from(imports).where(and(eq(imports.labId, labId), eq(imports.id, importId))).for('update');
+    await handle
+      .select({ id: imports.id })
+      .from(imports)
+      .where(and(eq(imports.labId, labId), eq(imports.id, importId)))
+      .for('update');
     const channel = await findOrMakeChannel(handle, wanted);
     if (channel.source !== wanted.source || channel.unit !== wanted.unit) throw new UnsuitableChannelError(channel);
     const key = { labId, channelId: channel.id };
@@ -121,7 +139,11 @@ export function storeImport(
   });
 }
 
-async function assertSameValues(client: PoolClient, { labId, channelId }: { labId: string; channelId: string }, batch: SampleBatch): Promise<void> {
+async function assertSameValues(
+  client: PoolClient,
+  { labId, channelId }: { labId: string; channelId: string },
+  batch: SampleBatch,
+): Promise<void> {
   const result = await client.query<{ index: string }>(
     `select batch.index from unnest($3::timestamptz[], $4::double precision[]) with ordinality as batch (at, value, index)
      join samples on samples.lab_id = $1 and samples.channel_id = $2 and samples.at = batch.at
@@ -134,7 +156,11 @@ async function assertSameValues(client: PoolClient, { labId, channelId }: { labI
 
 /** Channels of a rig that belong to all its runs. */
 export const channelsOfRig = (db: Handle, labId: string, rigId: string): Promise<ChannelRecord[]> =>
-  db.select().from(channels).where(and(eq(channels.labId, labId), eq(channels.rigId, rigId))).orderBy(asc(channels.name), asc(channels.createdAt));
+  db
+    .select()
+    .from(channels)
+    .where(and(eq(channels.labId, labId), eq(channels.rigId, rigId)))
+    .orderBy(asc(channels.name), asc(channels.createdAt));
 
 export interface WantedChannel {
   labId: string;
@@ -152,6 +178,8 @@ export interface WantedChannel {
 /** The channel of this name, made where it is missing; the caller compares unit and source. */
 export async function findOrMakeChannel(db: Handle, wanted: WantedChannel): Promise<ChannelRecord> {
   await db.insert(channels).values(wanted).onConflictDoNothing();
-  const own = (await channelsOfRig(db, wanted.labId, wanted.rigId)).filter((channel) => channel.runId === wanted.runId && channel.name === wanted.name);
+  const own = (await channelsOfRig(db, wanted.labId, wanted.rigId)).filter(
+    (channel) => channel.runId === wanted.runId && channel.name === wanted.name,
+  );
   return one(own);
 }

@@ -9,9 +9,26 @@ import type { Connection, Database, Handle } from './database';
 import { createRunStore } from './run-store';
 
 const summaryColumns = {
-  labId: runs.labId, id: runs.id, rigId: runs.rigId, rigRevision: runs.rigRevision, protocolId: runs.protocolId, massSetId: runs.massSetId, rehearsal: runs.rehearsal, rigName: runs.rigName,
-  protocolName: runs.protocolName, protocolRevision: runs.protocolRevision, massSetLabel: runs.massSetLabel, operator: runs.operator, lastSeq: runs.lastSeq, state: runs.state,
-  outcome: runs.outcome, failure: runs.failure, createdAt: runs.createdAt, startedAt: runs.startedAt, endedAt: runs.endedAt, predictedEndAt: runs.predictedEndAt,
+  labId: runs.labId,
+  id: runs.id,
+  rigId: runs.rigId,
+  rigRevision: runs.rigRevision,
+  protocolId: runs.protocolId,
+  massSetId: runs.massSetId,
+  rehearsal: runs.rehearsal,
+  rigName: runs.rigName,
+  protocolName: runs.protocolName,
+  protocolRevision: runs.protocolRevision,
+  massSetLabel: runs.massSetLabel,
+  operator: runs.operator,
+  lastSeq: runs.lastSeq,
+  state: runs.state,
+  outcome: runs.outcome,
+  failure: runs.failure,
+  createdAt: runs.createdAt,
+  startedAt: runs.startedAt,
+  endedAt: runs.endedAt,
+  predictedEndAt: runs.predictedEndAt,
 };
 
 /** What lists show of a run. */
@@ -40,7 +57,9 @@ export function listRuns(db: Handle, query: RunListQuery): Promise<RunListRow[]>
         eq(runs.labId, query.labId),
         query.rigId === undefined ? undefined : eq(runs.rigId, query.rigId),
         query.activeOnly ? notInArray(runs.state, endedStates) : undefined,
-        after === null ? undefined : or(lt(runs.createdAt, after.createdAt), and(eq(runs.createdAt, after.createdAt), lt(runs.id, after.id))),
+        after === null
+          ? undefined
+          : or(lt(runs.createdAt, after.createdAt), and(eq(runs.createdAt, after.createdAt), lt(runs.id, after.id))),
       ),
     )
     .orderBy(desc(runs.createdAt), desc(runs.id))
@@ -48,24 +67,38 @@ export function listRuns(db: Handle, query: RunListQuery): Promise<RunListRow[]>
 }
 
 export async function findRun(db: Handle, labId: string, runId: string): Promise<RunRecord | null> {
-  const [found] = await db.select().from(runs).where(and(eq(runs.labId, labId), eq(runs.id, runId)));
+  const [found] = await db
+    .select()
+    .from(runs)
+    .where(and(eq(runs.labId, labId), eq(runs.id, runId)));
   return found ?? null;
 }
 
 /** The run of each rig that has not ended, by rig. Rehearsals are no runs of the rig. */
 export async function activeRuns(db: Handle, labId: string): Promise<Map<string, RunListRow>> {
-  const rows = await db.select(summaryColumns).from(runs).where(and(eq(runs.labId, labId), eq(runs.rehearsal, false), notInArray(runs.state, endedStates)));
+  const rows = await db
+    .select(summaryColumns)
+    .from(runs)
+    .where(and(eq(runs.labId, labId), eq(runs.rehearsal, false), notInArray(runs.state, endedStates)));
   return new Map(rows.map((row) => [row.rigId, row]));
 }
 
 /** The step log of a run in order. */
 export async function readSteps(db: Handle, labId: string, runId: string): Promise<StepRow[]> {
-  const rows = await db.select().from(runSteps).where(and(eq(runSteps.labId, labId), eq(runSteps.runId, runId))).orderBy(asc(runSteps.seq));
+  const rows = await db
+    .select()
+    .from(runSteps)
+    .where(and(eq(runSteps.labId, labId), eq(runSteps.runId, runId)))
+    .orderBy(asc(runSteps.seq));
   return rows.map(({ labId: _lab, runId: _run, ...step }) => step);
 }
 
 /** Events of a run after `afterSeq`, oldest first. */
-export async function readEvents(db: Handle, run: { labId: string; runId: string }, page: { afterSeq: number; limit?: number }): Promise<ChainedEvent[]> {
+export async function readEvents(
+  db: Handle,
+  run: { labId: string; runId: string },
+  page: { afterSeq: number; limit?: number },
+): Promise<ChainedEvent[]> {
   const rows = await db
     .select()
     .from(runEvents)
@@ -79,7 +112,11 @@ export async function readEvents(db: Handle, run: { labId: string; runId: string
 export function channelsOfRun(db: Handle, run: { labId: string; id: string; rigId: string; rehearsal: boolean }): Promise<ChannelRecord[]> {
   const own = eq(channels.runId, run.id);
   const ofRig = and(eq(channels.rigId, run.rigId), isNull(channels.runId));
-  return db.select().from(channels).where(and(eq(channels.labId, run.labId), run.rehearsal ? own : or(own, ofRig))).orderBy(asc(channels.createdAt), asc(channels.name));
+  return db
+    .select()
+    .from(channels)
+    .where(and(eq(channels.labId, run.labId), run.rehearsal ? own : or(own, ofRig)))
+    .orderBy(asc(channels.createdAt), asc(channels.name));
 }
 
 export interface SampleWindow {
@@ -92,17 +129,29 @@ export interface SampleWindow {
 /** How many samples a channel has within a window. */
 export async function countSamples(connection: Connection, window: SampleWindow): Promise<number> {
   if (!isKey(window.labId) || !isKey(window.channelId)) return 0;
-  const result = await connection.pool.query<{ total: string }>('select count(*) as total from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4', windowParameters(window));
+  const result = await connection.pool.query<{ total: string }>(
+    'select count(*) as total from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4',
+    windowParameters(window),
+  );
   return Number(result.rows[0]?.total ?? 0);
 }
 
-const windowParameters = (window: SampleWindow) => [window.labId, window.channelId, timestampOfUtcMs(window.fromUtcMs), timestampOfUtcMs(window.toUtcMs)];
+const windowParameters = (window: SampleWindow) => [
+  window.labId,
+  window.channelId,
+  timestampOfUtcMs(window.fromUtcMs),
+  timestampOfUtcMs(window.toUtcMs),
+];
 
 /**
  * The least and the greatest sample of each of `intervals` equal parts of a window, in order of time: what a plot of
  * that many pixel columns can show, peaks included.
  */
-export async function extremesOf(connection: Connection, window: SampleWindow, intervals: number): Promise<{ utcMs: number[]; value: number[] }> {
+export async function extremesOf(
+  connection: Connection,
+  window: SampleWindow,
+  intervals: number,
+): Promise<{ utcMs: number[]; value: number[] }> {
   const result = await connection.pool.query<{ ms: number; value: number }>(
     `with part as materialized (
        select at, value, coalesce(least($5::int - 1, floor(extract(epoch from at - $3::timestamptz) / nullif(extract(epoch from $4::timestamptz - $3::timestamptz), 0) * $5)::int), 0) as number
@@ -119,12 +168,19 @@ export async function extremesOf(connection: Connection, window: SampleWindow, i
 
 /** The last instant at which a channel has a sample, or null. */
 export async function lastSampleUtcMs(connection: Connection, channel: { labId: string; channelId: string }): Promise<number | null> {
-  const result = await connection.pool.query<{ ms: number | null }>('select (extract(epoch from max(at)) * 1000)::double precision as ms from samples where lab_id = $1 and channel_id = $2', [channel.labId, channel.channelId]);
+  const result = await connection.pool.query<{ ms: number | null }>(
+    'select (extract(epoch from max(at)) * 1000)::double precision as ms from samples where lab_id = $1 and channel_id = $2',
+    [channel.labId, channel.channelId],
+  );
   return result.rows[0]?.ms ?? null;
 }
 
 /** Runs on rigs, of all labs, that have not ended. */
-export const unfinishedRuns = (db: Handle): Promise<RunRecord[]> => db.select().from(runs).where(and(eq(runs.rehearsal, false), notInArray(runs.state, endedStates)));
+export const unfinishedRuns = (db: Handle): Promise<RunRecord[]> =>
+  db
+    .select()
+    .from(runs)
+    .where(and(eq(runs.rehearsal, false), notInArray(runs.state, endedStates)));
 
 /** Ends a run that nothing can carry on, saying why. */
 export async function markRunFailed(db: Handle, run: { labId: string; id: string }, end: { why: string; nowUtcMs: number }): Promise<void> {
@@ -137,7 +193,26 @@ export async function markRunFailed(db: Handle, run: { labId: string; id: string
 /** Stores what a rehearsal left, all or nothing. */
 export async function storeRehearsal(db: Database, run: { labId: string; id: string }, records: RehearsalRecords): Promise<void> {
   const { outcome } = records;
-  const summary = { state: outcome, outcome, startedAtUtcMs: records.startedAtUtcMs, endedAtUtcMs: records.endedAtUtcMs, predictedEndUtcMs: null };
-  await createRunStore(db).commit({ labId: run.labId, runId: run.id, expectedSeq: 0, snapshot: null, chartVersion: 0, steps: records.steps, events: records.events, summary });
-  if (records.reason !== '') await db.update(runs).set({ failure: records.reason }).where(and(eq(runs.labId, run.labId), eq(runs.id, run.id)));
+  const summary = {
+    state: outcome,
+    outcome,
+    startedAtUtcMs: records.startedAtUtcMs,
+    endedAtUtcMs: records.endedAtUtcMs,
+    predictedEndUtcMs: null,
+  };
+  await createRunStore(db).commit({
+    labId: run.labId,
+    runId: run.id,
+    expectedSeq: 0,
+    snapshot: null,
+    chartVersion: 0,
+    steps: records.steps,
+    events: records.events,
+    summary,
+  });
+  if (records.reason !== '')
+    await db
+      .update(runs)
+      .set({ failure: records.reason })
+      .where(and(eq(runs.labId, run.labId), eq(runs.id, run.id)));
 }

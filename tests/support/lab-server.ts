@@ -3,7 +3,8 @@ import { tmpdir } from 'node:os';
 import request from 'supertest';
 import { demoIds, demoPeople, seedDemo } from '@/db/demo/seed';
 import { heavyTasks } from '@/server/boot/heavy-tasks';
-import { buildServer, type BuildOverrides, type BuiltServer } from '@/server/boot/build-server';
+import type { BuildOverrides } from '@/server/boot/build-parts';
+import { buildServer, type BuiltServer } from '@/server/boot/build-server';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import type { RigStation, StationRig } from '@/server/interfaces/rig-stations';
 import type { ServerConfig } from '@/server/interfaces/server-config';
@@ -21,7 +22,7 @@ import type { TestDatabase } from './database';
 export const sha256 = (text: string) => createHash('sha256').update(text).digest('hex');
 
 /** A clear evening in the lab's winter. */
-export const eveningUtcMs = Date.UTC(2031, 1, 14, 20);
+const eveningUtcMs = Date.UTC(2031, 1, 14, 20);
 
 export interface LabServerOptions {
   overrides?: BuildOverrides;
@@ -31,9 +32,25 @@ export interface LabServerOptions {
 }
 
 export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig> = {}): ServerConfig => ({
-  mode: 'test', databaseUrl: database.url, host: '127.0.0.1', port: 0, publicUrl: null, trustedProxies: 0, demo: true, stateDir: tmpdir(), webDir: null, smtpUrl: null,
-  mailFrom: 'Evenfall <evenfall@quillfen.example>', logLevel: 'silent',
-  limits: { requestsPerMinute: 1_000_000, interventionsPerMinute: 1_000_000, jsonBytes: 1_048_576, importBytes: 4_194_304, streamsPerUser: 6 },
+  mode: 'test',
+  databaseUrl: database.url,
+  host: '127.0.0.1',
+  port: 0,
+  publicUrl: null,
+  trustedProxies: 0,
+  demo: true,
+  stateDir: tmpdir(),
+  webDir: null,
+  smtpUrl: null,
+  mailFrom: 'Evenfall <evenfall@quillfen.example>',
+  logLevel: 'silent',
+  limits: {
+    requestsPerMinute: 1_000_000,
+    interventionsPerMinute: 1_000_000,
+    jsonBytes: 1_048_576,
+    importBytes: 4_194_304,
+    streamsPerUser: 6,
+  },
   ...changes,
 });
 
@@ -96,7 +113,10 @@ export class LabServer {
     const world = options.world ?? new World();
     await seedDemo(database.connection, { nowUtcMs: world.clock.utcMs(), hashPassword: async () => 'no password in this test', sha256 });
     const built = buildServer({
-      database: database.connection, clock: world.clock, config: testConfig(database, options.config), overrides: { tasks: heavyTasks, controllerOf: world.controllerOf, ticks: false, paceMs: 30_000, ...options.overrides },
+      database: database.connection,
+      clock: world.clock,
+      config: testConfig(database, options.config),
+      overrides: { tasks: heavyTasks, controllerOf: world.controllerOf, ticks: false, paceMs: 30_000, ...options.overrides },
     });
     world.drivenBy(built);
     const server = new LabServer(built, world, database);
@@ -148,19 +168,32 @@ export class LabServer {
   /** A request as a browser of that member would send it, with a fresh key for commands. */
   as(who: Role | { userId: string }, method: string, path: string): request.Test {
     const verb = method.toLowerCase() as 'get' | 'post' | 'put' | 'patch' | 'delete';
-    return request(this.built.app)[verb](`/api${path}`).set('Cookie', this.cookie(who)).set('Sec-Fetch-Site', 'same-origin').set('Idempotency-Key', randomUUID());
+    return request(this.built.app)
+      [verb](`/api${path}`)
+      .set('Cookie', this.cookie(who))
+      .set('Sec-Fetch-Site', 'same-origin')
+      .set('Idempotency-Key', randomUUID());
   }
 
   /** Makes a protocol and issues its first revision on the demo rig. Returns its id. */
   async issue(document: ProtocolDocument): Promise<string> {
     const made = await this.as('operator', 'POST', `/labs/${demoIds.lab}/protocols`).send({ document }).expect(201);
-    await this.as('operator', 'POST', `/labs/${demoIds.lab}/protocols/${made.body.id}/revisions`).set('If-Match', made.headers.etag as string).send({ rigId: demoIds.rig }).expect(201);
+    await this.as('operator', 'POST', `/labs/${demoIds.lab}/protocols/${made.body.id}/revisions`)
+      .set('If-Match', made.headers.etag as string)
+      .send({ rigId: demoIds.rig })
+      .expect(201);
     return made.body.id as string;
   }
 
   /** Asks to start the first revision of a protocol on the demo rig. */
   askStart(protocolId: string, change: object = {}): request.Test {
-    return this.as('operator', 'POST', `/labs/${demoIds.lab}/runs`).send({ rigId: demoIds.rig, protocolId, revision: 1, massSetId: demoIds.massSet, ...change });
+    return this.as('operator', 'POST', `/labs/${demoIds.lab}/runs`).send({
+      rigId: demoIds.rig,
+      protocolId,
+      revision: 1,
+      massSetId: demoIds.massSet,
+      ...change,
+    });
   }
 
   /** Arms the rig and starts a run of a new protocol. Returns the id of the run. */
@@ -185,7 +218,11 @@ export class LabServer {
   }
 
   /** Holds, resumes or stops a run as a member; `tappedAt` in ISO 8601. */
-  intervene(runId: string, what: 'hold' | 'hold-after-dwell' | 'resume' | 'stop', by: { who?: Role; tappedAt?: string } = {}): request.Test {
+  intervene(
+    runId: string,
+    what: 'hold' | 'hold-after-dwell' | 'resume' | 'stop',
+    by: { who?: Role; tappedAt?: string } = {},
+  ): request.Test {
     const { who = 'operator', ...body } = by;
     return this.as(who, 'POST', `/labs/${demoIds.lab}/runs/${runId}/${what}`).send(body);
   }
@@ -193,19 +230,31 @@ export class LabServer {
   /** Arms the demo rig until `hours` from now. */
   async arm(hours = 16, rigId: string = demoIds.rig): Promise<void> {
     const until = new Date(this.clock.utcMs() + hours * 3_600_000).toISOString();
-    await this.as('operator', 'POST', `/labs/${demoIds.lab}/rigs/${rigId}/arm`).send({ name: 'Ilse Marrowby', until, cautionsRead: true }).expect(201);
+    await this.as('operator', 'POST', `/labs/${demoIds.lab}/rigs/${rigId}/arm`)
+      .send({ name: 'Ilse Marrowby', until, cautionsRead: true })
+      .expect(201);
   }
 }
 
 /** Home, then near and far for half a minute each: over in a few minutes. */
 export const quickProtocol = (change: Partial<ProtocolDocument> = {}): ProtocolDocument => ({
-  formatVersion: 1, name: 'There and back',
-  steps: [{ kind: 'home' }, { kind: 'swing', to: 'near' }, { kind: 'dwell', for_s: 30 }, { kind: 'swing', to: 'far' }, { kind: 'dwell', for_s: 30 }],
+  formatVersion: 1,
+  name: 'There and back',
+  steps: [
+    { kind: 'home' },
+    { kind: 'swing', to: 'near' },
+    { kind: 'dwell', for_s: 30 },
+    { kind: 'swing', to: 'far' },
+    { kind: 'dwell', for_s: 30 },
+  ],
   ...change,
 });
 
 /** A second lab with a member of each role, who are strangers to the demo lab, and a rig without a line of its own. */
-export async function foreignLab(database: TestDatabase, nowUtcMs: number): Promise<{ labId: string; rigId: string; userOf: Record<Role, string> }> {
+export async function foreignLab(
+  database: TestDatabase,
+  nowUtcMs: number,
+): Promise<{ labId: string; rigId: string; userOf: Record<Role, string> }> {
   const { db } = database.connection;
   const lab = await createLab(db, { name: 'Harrowmere Physics Rooms', timeZone: 'Europe/Oslo', nowUtcMs });
   const userOf = {} as Record<Role, string>;
@@ -215,6 +264,10 @@ export async function foreignLab(database: TestDatabase, nowUtcMs: number): Prom
     userOf[role] = user.id;
     await addMember(db, { labId: lab.id, userId: user.id, role, nowUtcMs });
   }
-  const rigId = await createRig(db, { labId: lab.id, name: 'East pier', document: demoRigWide, link: { kind: 'simulated' }, massSetLabel: 'Tungsten' }, { userId: userOf.owner, name: 'Harrowmere owner', at: nowUtcMs });
+  const rigId = await createRig(
+    db,
+    { labId: lab.id, name: 'East pier', document: demoRigWide, link: { kind: 'simulated' }, massSetLabel: 'Tungsten' },
+    { userId: userOf.owner, name: 'Harrowmere owner', at: nowUtcMs },
+  );
   return { labId: lab.id, rigId, userOf };
 }

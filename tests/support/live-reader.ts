@@ -40,7 +40,8 @@ export class LiveReader {
   /** Resolves as soon as `there` is true of what has come so far. */
   async until(there: (reader: LiveReader) => boolean): Promise<void> {
     while (!there(this)) {
-      if (this.ended) throw new Error(`the stream ended after ${JSON.stringify(this.events.map(({ event, id }) => `${event} ${String(id)}`))}`);
+      if (this.ended)
+        throw new Error(`the stream ended after ${JSON.stringify(this.events.map(({ event, id }) => `${event} ${String(id)}`))}`);
       await new Promise<void>((resolve) => this.waiting.add(resolve));
     }
   }
@@ -73,7 +74,12 @@ export class LiveReader {
     if (lines[0]?.startsWith(':') === true) this.comments += 1;
     if (fields.has('retry')) this.retryMs = Number(fields.get('retry'));
     const data = fields.get('data');
-    if (data !== undefined) this.events.push({ event: fields.get('event') ?? 'message', id: fields.has('id') ? Number(fields.get('id')) : null, data: JSON.parse(data) as unknown });
+    if (data !== undefined)
+      this.events.push({
+        event: fields.get('event') ?? 'message',
+        id: fields.has('id') ? Number(fields.get('id')) : null,
+        data: JSON.parse(data) as unknown,
+      });
   }
 
   private wake(): void {

@@ -64,7 +64,11 @@ export class LiveHub {
   async open(res: Response, stream: { run: LiveRunKey; me: SignedIn; lastEventId: number | null }): Promise<void> {
     const { run, me, lastEventId } = stream;
     const open = [...this.readers].filter((reader) => reader.me.userId === me.userId).length;
-    if (open >= this.parts.streamsPerUser) throw new ProblemError('too-many-requests', `You have ${String(open)} live streams open, which is the most there may be. Close one of the other pages.`);
+    if (open >= this.parts.streamsPerUser)
+      throw new ProblemError(
+        'too-many-requests',
+        `You have ${String(open)} live streams open, which is the most there may be. Close one of the other pages.`,
+      );
     const reader: Reader = { run, me, stream: new EventStream(res), waiting: [], sentSeq: lastEventId ?? 0, samples: [] };
     this.readers.add(reader);
     reader.stream.onClosed(() => this.drop(reader));
@@ -188,7 +192,10 @@ function joined(batches: readonly LiveSamples[]): LiveSamples[] {
   const byChannel = new Map<string, LiveSamples>();
   for (const batch of batches) {
     const before = byChannel.get(batch.channelId);
-    byChannel.set(batch.channelId, before === undefined ? batch : { ...before, utcMs: [...before.utcMs, ...batch.utcMs], value: [...before.value, ...batch.value] });
+    byChannel.set(
+      batch.channelId,
+      before === undefined ? batch : { ...before, utcMs: [...before.utcMs, ...batch.utcMs], value: [...before.value, ...batch.value] },
+    );
   }
   return [...byChannel.values()];
 }

@@ -18,7 +18,11 @@ export function liveSourceOf(services: () => Services): LiveSource {
     beat: ({ rigId }) => {
       const link = services().stations.get(rigId)?.link;
       const health = link?.health();
-      return { link: health?.condition ?? 'closed', lastReplyAt: isoOrNull(health?.lastReplyUtcMs ?? null), angleDeg: link?.controller()?.angleDeg ?? null };
+      return {
+        link: health?.condition ?? 'closed',
+        lastReplyAt: isoOrNull(health?.lastReplyUtcMs ?? null),
+        angleDeg: link?.controller()?.angleDeg ?? null,
+      };
     },
     mayStillRead: async (reader, labId) => {
       const me = await services().access.signedIn(reader.token);

@@ -13,11 +13,23 @@ import { mount } from '../route-context';
 import type { Services } from '../services';
 
 const channelViewOf = (channel: store.ChannelRecord): ChannelView => ({
-  id: channel.id, rigId: channel.rigId, name: channel.name, quantity: channel.quantity, unit: channel.unit, role: channel.role, source: channel.source,
+  id: channel.id,
+  rigId: channel.rigId,
+  name: channel.name,
+  quantity: channel.quantity,
+  unit: channel.unit,
+  role: channel.role,
+  source: channel.source,
 });
 
 const importViewOf = (file: store.ImportRecord): ImportView => ({
-  id: file.id, runId: file.runId, fileName: file.fileName, state: file.state, bytes: file.bytes, sha256: file.sha256, preview: file.preview,
+  id: file.id,
+  runId: file.runId,
+  fileName: file.fileName,
+  state: file.state,
+  bytes: file.bytes,
+  sha256: file.sha256,
+  preview: file.preview,
 });
 
 async function loadRun(services: Services, labId: string, runId: string): Promise<RunRecord> {
@@ -33,8 +45,10 @@ async function loadImport(services: Services, labId: string, importId: string): 
 }
 
 function assertReceived(file: store.ImportRecord): void {
-  if (file.state === 'stored') throw new ProblemError('not-possible-now', `${file.fileName} is stored already. Begin a new import to read it in another way.`);
-  if (file.state !== 'received') throw new ProblemError('not-possible-now', `The content of ${file.fileName} has not arrived. Send the file first.`);
+  if (file.state === 'stored')
+    throw new ProblemError('not-possible-now', `${file.fileName} is stored already. Begin a new import to read it in another way.`);
+  if (file.state !== 'received')
+    throw new ProblemError('not-possible-now', `The content of ${file.fileName} has not arrived. Send the file first.`);
 }
 
 /** Keeps the file as it comes and looks into its first rows. */
@@ -48,7 +62,12 @@ async function receive(services: Services, file: store.ImportRecord, content: Re
     await store.changeImport(db, key, { state: 'received', bytes: watch.bytes, sha256: watch.sha256(), preview });
   } catch (error) {
     await store.dropPieces(db, key);
-    await store.changeImport(db, key, { state: error instanceof UnreadableFile ? 'refused' : 'waiting', bytes: 0, sha256: null, preview: null });
+    await store.changeImport(db, key, {
+      state: error instanceof UnreadableFile ? 'refused' : 'waiting',
+      bytes: 0,
+      sha256: null,
+      preview: null,
+    });
     if (error instanceof UnreadableFile) throw new ProblemError('unreadable-data', `${file.fileName}: ${error.message}`);
     if (error instanceof FileTooLarge) throw tooLarge(file, services);
     throw error;
@@ -56,19 +75,34 @@ async function receive(services: Services, file: store.ImportRecord, content: Re
 }
 
 function tooLarge(file: store.ImportRecord, services: Services): ProblemError {
-  return new ProblemError('too-large', `${file.fileName} is larger than ${String(Math.round(services.config.limits.importBytes / 1_048_576))} MiB. Cut it into parts, or leave out columns that are not needed.`);
+  return new ProblemError(
+    'too-large',
+    `${file.fileName} is larger than ${String(Math.round(services.config.limits.importBytes / 1_048_576))} MiB. Cut it into parts, or leave out columns that are not needed.`,
+  );
 }
 
 /** Why a file cannot go into the channel that was named. */
 function channelRefusal(channel: store.ChannelRecord, unit: string): ProblemError {
   const item = [{ path: 'channelName', message: `a name other than ${channel.name}` }];
-  if (channel.source !== 'import') return new ProblemError('already-exists', `The channel ${channel.name} is filled by the rig itself. Choose another name for the imported one.`, item);
-  return new ProblemError('already-exists', `The channel ${channel.name} is in ${channel.unit}, the file in ${unit}. Choose another name, or the unit ${channel.unit}.`, item);
+  if (channel.source !== 'import')
+    return new ProblemError(
+      'already-exists',
+      `The channel ${channel.name} is filled by the rig itself. Choose another name for the imported one.`,
+      item,
+    );
+  return new ProblemError(
+    'already-exists',
+    `The channel ${channel.name} is in ${channel.unit}, the file in ${unit}. Choose another name, or the unit ${channel.unit}.`,
+    item,
+  );
 }
 
 /** What the problems of a file say when it was to be stored. */
 function unreadable(file: store.ImportRecord, reading: Awaited<ReturnType<typeof readImport>>): ProblemError {
-  const items = reading.problems.map(({ row, column, message }) => ({ path: [row === null ? '' : `row ${String(row)}`, column ?? ''].filter((part) => part !== '').join(', '), message }));
+  const items = reading.problems.map(({ row, column, message }) => ({
+    path: [row === null ? '' : `row ${String(row)}`, column ?? ''].filter((part) => part !== '').join(', '),
+    message,
+  }));
   const first = items[0];
   const words = first === undefined ? '' : [first.path, first.message].filter((part) => part !== '').join(': ');
   const count = reading.problemCount === 1 ? 'One problem' : `${String(reading.problemCount)} problems`;
@@ -85,7 +119,15 @@ export const dataRoutes = [
 
   mount(contracts.beginImport, async ({ params, membership, services, body, me }) => {
     const run = await loadRun(services, membership.labId, params.runId);
-    return importViewOf(await store.beginImport(services.database.db, { labId: run.labId, runId: run.id, fileName: body.fileName, createdAt: services.clock.utcMs(), createdBy: me.name }));
+    return importViewOf(
+      await store.beginImport(services.database.db, {
+        labId: run.labId,
+        runId: run.id,
+        fileName: body.fileName,
+        createdAt: services.clock.utcMs(),
+        createdBy: me.name,
+      }),
+    );
   }),
 
   mount(contracts.putImportContent, async ({ params, membership, services, req }) => {
@@ -111,31 +153,54 @@ export const dataRoutes = [
     const { channelName, mapping } = body;
     const nowUtcMs = services.clock.utcMs();
     const channel: store.WantedChannel = {
-      labId: run.labId, rigId: run.rigId, runId: run.rehearsal ? run.id : null, name: channelName, unit: mapping.unit, quantity: mapping.unit.endsWith('rad') ? 'pendulum angle' : 'spot position', role: 'deflection',
-      source: 'import', createdAt: nowUtcMs,
+      labId: run.labId,
+      rigId: run.rigId,
+      runId: run.rehearsal ? run.id : null,
+      name: channelName,
+      unit: mapping.unit,
+      quantity: mapping.unit.endsWith('rad') ? 'pendulum angle' : 'spot position',
+      role: 'deflection',
+      source: 'import',
+      createdAt: nowUtcMs,
     };
     try {
-      const done = await store.storeImport(services.database, { labId: file.labId, importId: file.id, channel, storedAt: nowUtcMs, mapping }, async (take) => {
-        const reading = await readImport(services, { file, run, mapping }, take);
-        if (!reading.ok) throw unreadable(file, reading);
-      });
+      const done = await store.storeImport(
+        services.database,
+        { labId: file.labId, importId: file.id, channel, storedAt: nowUtcMs, mapping },
+        async (take) => {
+          const reading = await readImport(services, { file, run, mapping }, take);
+          if (!reading.ok) throw unreadable(file, reading);
+        },
+      );
       return { ...done, channel: channelViewOf(done.channel) };
     } catch (error) {
       if (error instanceof store.UnsuitableChannelError) throw channelRefusal(error.channel, mapping.unit);
       if (!(error instanceof store.ConflictingSamplesError)) throw error;
-      throw new ProblemError('already-exists', `Nothing was stored: the channel ${channelName} holds another value at ${isoOf(error.atUtcMs)} already. Choose another channel name.`, [{ path: 'channelName', message: `a name other than ${channelName}` }]);
+      throw new ProblemError(
+        'already-exists',
+        `Nothing was stored: the channel ${channelName} holds another value at ${isoOf(error.atUtcMs)} already. Choose another channel name.`,
+        [{ path: 'channelName', message: `a name other than ${channelName}` }],
+      );
     }
   }),
 
   mount(contracts.readSamples, async ({ params, membership, services, query }) => {
     const run = await loadRun(services, membership.labId, params.runId);
     const channels = await channelsOfRun(services.database.db, run);
-    const window = { fromUtcMs: query.fromUtcMs ?? run.startedAt ?? run.createdAt, toUtcMs: query.toUtcMs ?? run.endedAt ?? services.clock.utcMs() };
-    if (window.toUtcMs < window.fromUtcMs) throw new ProblemError('invalid-input', 'The window ends before it begins.', [{ path: 'toUtcMs', message: 'not before fromUtcMs' }]);
+    const window = {
+      fromUtcMs: query.fromUtcMs ?? run.startedAt ?? run.createdAt,
+      toUtcMs: query.toUtcMs ?? run.endedAt ?? services.clock.utcMs(),
+    };
+    if (window.toUtcMs < window.fromUtcMs)
+      throw new ProblemError('invalid-input', 'The window ends before it begins.', [{ path: 'toUtcMs', message: 'not before fromUtcMs' }]);
     const { channel, total } = await chooseChannel(services, { run, channels, window }, query.channelId);
     const view = { channel: channel === null ? null : channelViewOf(channel), channels: channels.map(channelViewOf), total };
     if (channel === null) return { ...view, utcMs: [], value: [] };
-    if (total > query.points) return { ...view, ...(await extremesOf(services.database, { ...window, labId: run.labId, channelId: channel.id }, Math.floor(query.points / 2))) };
+    if (total > query.points)
+      return {
+        ...view,
+        ...(await extremesOf(services.database, { ...window, labId: run.labId, channelId: channel.id }, Math.floor(query.points / 2))),
+      };
     const batch = await services.samples.read(run.labId, channel.id, window);
     return { ...view, utcMs: [...batch.utcMs], value: [...batch.value] };
   }),
@@ -148,7 +213,11 @@ interface ChannelChoice {
 }
 
 /** The channel asked for, else the registered one, else the first deflection channel with samples in the window. */
-async function chooseChannel(services: Services, { run, channels, window }: ChannelChoice, channelId: string | undefined): Promise<{ channel: store.ChannelRecord | null; total: number }> {
+async function chooseChannel(
+  services: Services,
+  { run, channels, window }: ChannelChoice,
+  channelId: string | undefined,
+): Promise<{ channel: store.ChannelRecord | null; total: number }> {
   const count = (channel: store.ChannelRecord) => countSamples(services.database, { ...window, labId: run.labId, channelId: channel.id });
   if (channelId !== undefined) {
     const asked = channels.find((channel) => channel.id === channelId);
@@ -156,7 +225,9 @@ async function chooseChannel(services: Services, { run, channels, window }: Chan
     return { channel: asked, total: await count(asked) };
   }
   const registered = run.start.protocol.evaluation?.channel;
-  const deflection = channels.filter((channel) => channel.role === 'deflection').sort((a, b) => Number(b.name === registered) - Number(a.name === registered));
+  const deflection = channels
+    .filter((channel) => channel.role === 'deflection')
+    .sort((a, b) => Number(b.name === registered) - Number(a.name === registered));
   for (const channel of deflection) {
     const total = await count(channel);
     if (total > 0) return { channel, total };

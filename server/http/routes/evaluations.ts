@@ -9,7 +9,14 @@ import { mount } from '../route-context';
 import type { Services } from '../services';
 
 const listViewOf = (evaluation: Omit<store.EvaluationRecord, 'curves'>): Omit<EvaluationView, 'curves'> => ({
-  id: evaluation.id, runId: evaluation.runId, state: evaluation.state, createdAt: isoOf(evaluation.createdAt), createdBy: evaluation.createdBy, channel: evaluation.channel, error: evaluation.error, result: evaluation.result,
+  id: evaluation.id,
+  runId: evaluation.runId,
+  state: evaluation.state,
+  createdAt: isoOf(evaluation.createdAt),
+  createdBy: evaluation.createdBy,
+  channel: evaluation.channel,
+  error: evaluation.error,
+  result: evaluation.result,
 });
 
 const viewOf = (evaluation: store.EvaluationRecord): EvaluationView => ({ ...listViewOf(evaluation), curves: evaluation.curves });
@@ -32,11 +39,17 @@ async function channelToEvaluate(services: Services, run: RunRecord, asked: stri
   if (wanted !== undefined) {
     if (filled.includes(wanted)) return wanted;
     const there = filled.length === 0 ? 'no deflection channel has any' : `these have: ${filled.join(', ')}`;
-    throw new ProblemError('cannot-evaluate', `The channel "${wanted}" has no deflection within this run; ${there}.`, [{ path: 'channel', message: 'a deflection channel with data' }]);
+    throw new ProblemError('cannot-evaluate', `The channel "${wanted}" has no deflection within this run; ${there}.`, [
+      { path: 'channel', message: 'a deflection channel with data' },
+    ]);
   }
   const [only, second] = filled;
-  if (only === undefined) throw new ProblemError('cannot-evaluate', 'No deflection lies within this run. Bring the file of the readout in first.');
-  if (second !== undefined) throw new ProblemError('cannot-evaluate', `More than one channel has deflection within this run: ${filled.join(', ')}. Choose one.`, [{ path: 'channel', message: `one of ${filled.join(', ')}` }]);
+  if (only === undefined)
+    throw new ProblemError('cannot-evaluate', 'No deflection lies within this run. Bring the file of the readout in first.');
+  if (second !== undefined)
+    throw new ProblemError('cannot-evaluate', `More than one channel has deflection within this run: ${filled.join(', ')}. Choose one.`, [
+      { path: 'channel', message: `one of ${filled.join(', ')}` },
+    ]);
   return only;
 }
 
@@ -45,7 +58,13 @@ export const evaluationRoutes = [
     const run = await loadRun(services, membership.labId, params.runId);
     assertEnded(run);
     const channel = await channelToEvaluate(services, run, body.channel);
-    const evaluation = await store.queueEvaluation(services.database.db, { labId: run.labId, runId: run.id, channel, createdAt: services.clock.utcMs(), createdBy: me.name });
+    const evaluation = await store.queueEvaluation(services.database.db, {
+      labId: run.labId,
+      runId: run.id,
+      channel,
+      createdAt: services.clock.utcMs(),
+      createdBy: me.name,
+    });
     services.pokeJobs();
     return viewOf(evaluation);
   }),

@@ -9,4 +9,13 @@ import { runRoutes } from './runs';
 import { serviceRoutes } from './service';
 
 /** Every route of the API with the function that answers it. */
-export const allRoutes: readonly MountedRoute[] = [...serviceRoutes, ...peopleRoutes, ...rigRoutes, ...protocolRoutes, ...runRoutes, ...liveRoutes, ...dataRoutes, ...evaluationRoutes];
+export const allRoutes: readonly MountedRoute[] = [
+  ...serviceRoutes,
+  ...peopleRoutes,
+  ...rigRoutes,
+  ...protocolRoutes,
+  ...runRoutes,
+  ...liveRoutes,
+  ...dataRoutes,
+  ...evaluationRoutes,
+];

@@ -12,7 +12,8 @@ import { refusalOf } from '../refused-protocol';
 import { mount, type Membership } from '../route-context';
 import type { Services } from '../services';
 
-const countSteps = (steps: readonly Step[]): number => steps.reduce((sum, step) => sum + 1 + (step.kind === 'repeat' ? countSteps(step.steps) : 0), 0);
+const countSteps = (steps: readonly Step[]): number =>
+  steps.reduce((sum, step) => sum + 1 + (step.kind === 'repeat' ? countSteps(step.steps) : 0), 0);
 
 function summaryOf(protocol: store.ProtocolRecord, latest: { number: number; draftVersion: number } | null): ProtocolSummary {
   return {
@@ -27,10 +28,18 @@ function summaryOf(protocol: store.ProtocolRecord, latest: { number: number; dra
 }
 
 const revisionSummaryOf = (revision: { number: number; issuedAt: number; issuedBy: string; note: string }) => ({
-  number: revision.number, issuedAt: isoOf(revision.issuedAt), issuedBy: revision.issuedBy, note: revision.note,
+  number: revision.number,
+  issuedAt: isoOf(revision.issuedAt),
+  issuedBy: revision.issuedBy,
+  note: revision.note,
 });
 
-const revisionOf = (revision: store.RevisionRecord): ProtocolRevision => ({ ...revisionSummaryOf(revision), protocolId: revision.protocolId, document: revision.document, sha256: revision.sha256 });
+const revisionOf = (revision: store.RevisionRecord): ProtocolRevision => ({
+  ...revisionSummaryOf(revision),
+  protocolId: revision.protocolId,
+  document: revision.document,
+  sha256: revision.sha256,
+});
 
 async function load(services: Services, labId: string, protocolId: string): Promise<store.ProtocolRecord> {
   const protocol = await store.findProtocol(services.database.db, labId, protocolId);
@@ -47,7 +56,10 @@ const versionOf = (protocol: store.ProtocolRecord) => String(protocol.version);
 
 function editedMeanwhile(protocol: store.ProtocolRecord, membership: Membership): ProblemError {
   const at = formatClockWithZone(protocol.updatedAt, { timeZone: membership.timeZone, precision: 'seconds', weekday: true });
-  return new ProblemError('edited-meanwhile', `${protocol.updatedBy} saved this protocol at ${at}, after you opened it. Compare the two, then save yours over it or take theirs.`);
+  return new ProblemError(
+    'edited-meanwhile',
+    `${protocol.updatedBy} saved this protocol at ${at}, after you opened it. Compare the two, then save yours over it or take theirs.`,
+  );
 }
 
 export const protocolRoutes = [
@@ -86,7 +98,10 @@ export const protocolRoutes = [
   mount(contracts.deleteProtocol, async ({ params, membership, services }) => {
     const protocol = await load(services, membership.labId, params.protocolId);
     if (await store.deleteProtocol(services.database.db, membership.labId, protocol.id)) return undefined;
-    throw new ProblemError('not-possible-now', `${protocol.name} has issued revisions, which runs may refer to; only a protocol that was never issued can be deleted.`);
+    throw new ProblemError(
+      'not-possible-now',
+      `${protocol.name} has issued revisions, which runs may refer to; only a protocol that was never issued can be deleted.`,
+    );
   }),
 
   mount(contracts.issueRevision, async (context) => {
@@ -97,14 +112,24 @@ export const protocolRoutes = [
     const rig = await findRig(db, membership.labId, body.rigId);
     if (rig === null) throw notFound('rig');
     const [latest] = await store.listRevisions(db, membership.labId, protocol.id);
-    if (latest?.draftVersion === protocol.version) throw new ProblemError('not-possible-now', `Nothing has changed since revision ${String(latest.number)} was issued; that revision holds.`);
+    if (latest?.draftVersion === protocol.version)
+      throw new ProblemError(
+        'not-possible-now',
+        `Nothing has changed since revision ${String(latest.number)} was issued; that revision holds.`,
+      );
     const refusal = refusalOf(checkProtocol(protocol.document, rig.document));
     if (refusal !== null) throw refusal;
     const revision = await store.issueRevision(
       db,
       {
-        labId: membership.labId, protocolId: protocol.id, draftVersion: protocol.version, document: protocol.document, sha256: services.sha256(canonicalize(protocol.document) ?? ''),
-        note: body.note, rigId: rig.id, rigRevision: rig.revision,
+        labId: membership.labId,
+        protocolId: protocol.id,
+        draftVersion: protocol.version,
+        document: protocol.document,
+        sha256: services.sha256(canonicalize(protocol.document) ?? ''),
+        note: body.note,
+        rigId: rig.id,
+        rigRevision: rig.revision,
       },
       makerOf(context),
     );
@@ -115,7 +140,9 @@ export const protocolRoutes = [
 
   mount(contracts.getRevision, async ({ params, membership, services }) => {
     const number = Number(params.revision);
-    const revision = Number.isSafeInteger(number) ? await store.findRevision(services.database.db, { labId: membership.labId, protocolId: params.protocolId }, number) : null;
+    const revision = Number.isSafeInteger(number)
+      ? await store.findRevision(services.database.db, { labId: membership.labId, protocolId: params.protocolId }, number)
+      : null;
     if (revision === null) throw notFound('protocol revision');
     return revisionOf(revision);
   }),

@@ -30,8 +30,18 @@ const shortestArmMs = 60_000;
 function armEnd(until: string, nowUtcMs: number): number {
   const untilUtcMs = Date.parse(until);
   const item = (message: string) => [{ path: 'until', message }];
-  if (untilUtcMs < nowUtcMs + shortestArmMs) throw new ProblemError('invalid-input', `The arm would end at ${until}, which is past or less than a minute ahead. Choose a later end.`, item('an instant in the future'));
-  if (untilUtcMs > nowUtcMs + longestArmMs) throw new ProblemError('invalid-input', `The arm would end at ${until}, more than 72 h ahead. Nobody can answer for a rig for longer; choose an end before ${isoOf(nowUtcMs + longestArmMs)}.`, item('at most 72 h ahead'));
+  if (untilUtcMs < nowUtcMs + shortestArmMs)
+    throw new ProblemError(
+      'invalid-input',
+      `The arm would end at ${until}, which is past or less than a minute ahead. Choose a later end.`,
+      item('an instant in the future'),
+    );
+  if (untilUtcMs > nowUtcMs + longestArmMs)
+    throw new ProblemError(
+      'invalid-input',
+      `The arm would end at ${until}, more than 72 h ahead. Nobody can answer for a rig for longer; choose an end before ${isoOf(nowUtcMs + longestArmMs)}.`,
+      item('at most 72 h ahead'),
+    );
   return untilUtcMs;
 }
 
@@ -46,7 +56,9 @@ const rigRouteList = [
     const { body, membership, services } = context;
     await services.stations.assertAllowed(body.link);
     const entry = { kind: 'rig.added', data: (rigId: string) => ({ rigId, name: body.name }) };
-    const rigId = await audited(context, entry, (tx) => store.createRig(tx, { labId: membership.labId, ...body, massSetLabel: 'As in the rig document' }, makerOf(context)));
+    const rigId = await audited(context, entry, (tx) =>
+      store.createRig(tx, { labId: membership.labId, ...body, massSetLabel: 'As in the rig document' }, makerOf(context)),
+    );
     const rig = await load(context, rigId);
     await services.stations.put(rig);
     return rigViewOf(services, rig);
@@ -63,7 +75,10 @@ const rigRouteList = [
     const before = await load(context, params.rigId);
     if (String(before.revision) !== ifMatch) throw await revisedMeanwhile(context, before);
     await assertFree(services, before);
-    const entry = { kind: 'rig.revised', data: (done: boolean) => ({ rigId: before.id, from: before.revision, to: done ? before.revision + 1 : null, reason: body.reason }) };
+    const entry = {
+      kind: 'rig.revised',
+      data: (done: boolean) => ({ rigId: before.id, from: before.revision, to: done ? before.revision + 1 : null, reason: body.reason }),
+    };
     const revision = { labId: membership.labId, rigId: before.id, expectedRevision: before.revision, ...body };
     const done = await audited(context, entry, async (tx) => {
       if (!(await store.reviseRig(tx, revision, makerOf(context)))) throw await revisedMeanwhile(context, await load(context, before.id));
@@ -78,14 +93,22 @@ const rigRouteList = [
   mount(contracts.listRigRevisions, async (context) => {
     const rig = await load(context, context.params.rigId);
     const revisions = await store.listRigRevisions(context.services.database.db, rig.labId, rig.id);
-    return { items: revisions.map(({ number, madeAt, madeBy, reason, document }) => ({ number, at: isoOf(madeAt), by: madeBy, reason, document })) };
+    return {
+      items: revisions.map(({ number, madeAt, madeBy, reason, document }) => ({ number, at: isoOf(madeAt), by: madeBy, reason, document })),
+    };
   }),
 ];
 
-async function revisedMeanwhile({ services, membership }: Pick<Caller, 'services' | 'membership'>, rig: store.RigRecord): Promise<ProblemError> {
+async function revisedMeanwhile(
+  { services, membership }: Pick<Caller, 'services' | 'membership'>,
+  rig: store.RigRecord,
+): Promise<ProblemError> {
   const [newest] = await store.listRigRevisions(services.database.db, membership.labId, rig.id);
   const who = newest === undefined ? 'Somebody' : newest.madeBy;
-  return new ProblemError('edited-meanwhile', `${who} made revision ${String(rig.revision)} of ${rig.name} after you opened it${newest === undefined ? '' : ` ("${newest.reason}", ${isoOf(newest.madeAt)})`}. Open that revision and make your change there.`);
+  return new ProblemError(
+    'edited-meanwhile',
+    `${who} made revision ${String(rig.revision)} of ${rig.name} after you opened it${newest === undefined ? '' : ` ("${newest.reason}", ${isoOf(newest.madeAt)})`}. Open that revision and make your change there.`,
+  );
 }
 
 const linkRoutes = [
@@ -95,7 +118,9 @@ const linkRoutes = [
     await assertFree(services, before);
     await services.stations.assertAllowed(body);
     const entry = { kind: 'rig.link-changed', data: () => ({ rigId: before.id, from: before.link, to: body }) };
-    await audited(context, entry, (tx) => store.changeRigLink(tx, { labId: before.labId, rigId: before.id, settings: body }, makerOf(context)));
+    await audited(context, entry, (tx) =>
+      store.changeRigLink(tx, { labId: before.labId, rigId: before.id, settings: body }, makerOf(context)),
+    );
     const rig = await load(context, before.id);
     await services.stations.put(rig);
     return rigViewOf(services, rig);
@@ -116,11 +141,19 @@ const armRoutes = [
     const nowUtcMs = services.clock.utcMs();
     const untilUtcMs = armEnd(body.until, nowUtcMs);
     const controller = services.stations.get(rig.id)?.link.controller() ?? null;
-    if (controller === null) throw new ProblemError('not-ready', `The controller of ${rig.name} does not answer, so nobody can say whether it is safe. See to the link first.`);
-    if (!controller.interlockClosed) throw new ProblemError('not-ready', `The interlock of ${rig.name} is open. Leave the room, close the door, then arm.`);
-    if (!controller.supplyPresent) throw new ProblemError('not-ready', `The motor supply of ${rig.name} is off. Switch it on at the rig, then arm.`);
+    if (controller === null)
+      throw new ProblemError(
+        'not-ready',
+        `The controller of ${rig.name} does not answer, so nobody can say whether it is safe. See to the link first.`,
+      );
+    if (!controller.interlockClosed)
+      throw new ProblemError('not-ready', `The interlock of ${rig.name} is open. Leave the room, close the door, then arm.`);
+    if (!controller.supplyPresent)
+      throw new ProblemError('not-ready', `The motor supply of ${rig.name} is off. Switch it on at the rig, then arm.`);
     const entry = { kind: 'rig.armed', data: () => ({ rigId: rig.id, name: body.name, until: body.until }) };
-    const stored = await audited(context, entry, (tx) => armRig(tx, { labId: rig.labId, rigId: rig.id, name: body.name, note: body.note, armedById: me.userId, nowUtcMs, untilUtcMs }));
+    const stored = await audited(context, entry, (tx) =>
+      armRig(tx, { labId: rig.labId, rigId: rig.id, name: body.name, note: body.note, armedById: me.userId, nowUtcMs, untilUtcMs }),
+    );
     const arm = { id: stored.id, name: stored.name, note: stored.note, fromUtcMs: stored.fromAt, untilUtcMs: stored.untilAt };
     services.arms.set(rig.id, arm);
     return armViewOf(arm);
@@ -139,7 +172,10 @@ const armRoutes = [
     const entry = { kind: 'rig.mass-set-added', data: () => ({ rigId: rig.id, label: body.label }) };
     return audited(context, entry, async (tx) => {
       const massSet = await store.addMassSet(tx, { labId: rig.labId, rigId: rig.id, ...body, createdAt: services.clock.utcMs() });
-      if (massSet === null) throw new ProblemError('already-exists', `${rig.name} has a mass set called "${body.label}" already. Choose another label.`, [{ path: 'label', message: 'a label of its own' }]);
+      if (massSet === null)
+        throw new ProblemError('already-exists', `${rig.name} has a mass set called "${body.label}" already. Choose another label.`, [
+          { path: 'label', message: 'a label of its own' },
+        ]);
       return massSet;
     });
   }),
@@ -149,8 +185,19 @@ const armRoutes = [
     const rig = await load(context, params.rigId);
     const revision = await findRevision(services.database.db, { labId: membership.labId, protocolId: query.protocolId }, query.revision);
     if (revision === null) throw notFound('protocol revision');
-    const report = await makeStartChecks(services, { rig, document: rig.document, protocol: revision.document, timeZone: membership.timeZone });
-    return { checks: report.checks, mayStart: report.mayStart, durationS: report.durationS, finishAt: isoOf(report.finishUtcMs), firstMove: report.firstMove };
+    const report = await makeStartChecks(services, {
+      rig,
+      document: rig.document,
+      protocol: revision.document,
+      timeZone: membership.timeZone,
+    });
+    return {
+      checks: report.checks,
+      mayStart: report.mayStart,
+      durationS: report.durationS,
+      finishAt: isoOf(report.finishUtcMs),
+      firstMove: report.firstMove,
+    };
   }),
 ];
 

@@ -25,7 +25,11 @@ const startRoutes = [
   mount(contracts.listRuns, async ({ query, membership, services }) => {
     const after = decodeCursor(query.cursor, ['number', 'string']);
     const rows = await store.listRuns(services.database.db, {
-      labId: membership.labId, rigId: query.rigId, activeOnly: query.active === 'true', after: after === null ? null : { createdAt: after[0], id: after[1] }, limit: query.limit + 1,
+      labId: membership.labId,
+      rigId: query.rigId,
+      activeOnly: query.active === 'true',
+      after: after === null ? null : { createdAt: after[0], id: after[1] },
+      limit: query.limit + 1,
     });
     const page = pageFrom(rows, query.limit, (row) => [row.createdAt, row.id]);
     return { items: page.items.map(runSummaryOf), next: page.next };
@@ -41,7 +45,14 @@ const startRoutes = [
     if (revision === null) throw notFound('protocol revision');
     const massSet = await findMassSet(db, { labId: membership.labId, rigId: rig.id }, body.massSetId);
     if (massSet === null) throw notFound('mass set');
-    const run = await beginRun(context, { rig, protocolId: body.protocolId, protocol: revision.document, revision: revision.number, massSet, notes: body.notes });
+    const run = await beginRun(context, {
+      rig,
+      protocolId: body.protocolId,
+      protocol: revision.document,
+      revision: revision.number,
+      massSet,
+      notes: body.notes,
+    });
     return runSummaryOf(run);
   }),
 
@@ -52,9 +63,17 @@ const startRoutes = [
     if (rig === null) throw notFound('rig');
     const protocol = await findProtocol(db, membership.labId, body.protocolId);
     if (protocol === null) throw notFound('protocol');
-    const revision = body.revision === undefined ? null : await findRevision(db, { labId: membership.labId, protocolId: protocol.id }, body.revision);
+    const revision =
+      body.revision === undefined ? null : await findRevision(db, { labId: membership.labId, protocolId: protocol.id }, body.revision);
     if (body.revision !== undefined && revision === null) throw notFound('protocol revision');
-    const run = await beginRehearsal(context, { rig, protocolId: protocol.id, protocol: revision?.document ?? protocol.document, revision: revision?.number ?? 0, notes: '', seed: body.seed });
+    const run = await beginRehearsal(context, {
+      rig,
+      protocolId: protocol.id,
+      protocol: revision?.document ?? protocol.document,
+      revision: revision?.number ?? 0,
+      notes: '',
+      seed: body.seed,
+    });
     return runSummaryOf(run);
   }),
 
@@ -82,18 +101,27 @@ async function driverOf(services: Services, labId: string, runId: string): Promi
   if (atOnce !== null) return atOnce.driver;
   const run = await load(services, labId, runId);
   if (run.rehearsal) throw new ProblemError('not-possible-now', 'A rehearsal runs by itself in fast time; nobody can step in.');
-  if (['finished', 'stopped', 'failed'].includes(run.state)) throw new ProblemError('not-possible-now', `The run is over: it ${run.state === 'failed' ? 'failed' : run.state === 'stopped' ? 'was stopped' : 'has finished'}.`);
+  if (['finished', 'stopped', 'failed'].includes(run.state))
+    throw new ProblemError(
+      'not-possible-now',
+      `The run is over: it ${run.state === 'failed' ? 'failed' : run.state === 'stopped' ? 'was stopped' : 'has finished'}.`,
+    );
   await waitTakenUp(services);
   const later = services.activeRuns.find(labId, runId);
   if (later !== null) return later.driver;
-  const why = services.supervisor.quarantinedOf(run.rigId)?.why ?? 'No server drives this run at the moment, so nothing keeps the turntable moving: its motion lease lapses within 2 s.';
+  const why =
+    services.supervisor.quarantinedOf(run.rigId)?.why ??
+    'No server drives this run at the moment, so nothing keeps the turntable moving: its motion lease lapses within 2 s.';
   throw new ProblemError('not-possible-now', `${why} Use the switch at the rig if anything moves.`);
 }
 
 /** Enters what a person did into the audit chain when the database can be reached; the act itself does not wait for it. */
 function auditLater({ me, membership, services }: Caller, kind: string, runId: string): void {
   const fact = { labId: membership.labId, who: { id: me.userId, name: me.name }, kind, data: { runId }, utcMs: services.clock.utcMs() };
-  services.background(services.database.db.transaction((tx) => appendAudit(tx, fact, services.sha256)), 'an entry of the audit chain');
+  services.background(
+    services.database.db.transaction((tx) => appendAudit(tx, fact, services.sha256)),
+    'an entry of the audit chain',
+  );
 }
 
 function accepted(runId: string, answer: Answer): { runId: string; serverAt: string } {
@@ -122,7 +150,11 @@ const interventionRoutes = [
     const driver = await driverOf(services, membership.labId, params.runId);
     const { rigId } = (services.activeRuns.find(membership.labId, params.runId) ?? { run: { rigId: '' } }).run;
     const answer = await driver.resume(me.name);
-    if (!answer.ok) throw new ProblemError(driver.state().state === 'held' && services.arms.armOf(rigId) === null ? 'not-armed' : 'not-possible-now', answer.why);
+    if (!answer.ok)
+      throw new ProblemError(
+        driver.state().state === 'held' && services.arms.armOf(rigId) === null ? 'not-armed' : 'not-possible-now',
+        answer.why,
+      );
     auditLater(context, 'run.resumed', params.runId);
     return accepted(params.runId, answer);
   }),
@@ -154,7 +186,12 @@ async function endQuarantined(caller: Caller, run: store.RunRecord): Promise<{ r
 
 /** A name that says what the file is, with nothing in it that a file system or a header could misread. */
 function attach(res: Response, run: store.RunRecord, ending: string): void {
-  const name = run.protocolName.toLowerCase().replaceAll(/[^a-z0-9]+/g, '-').replaceAll(/^-|-$/g, '').slice(0, 40) || 'run';
+  const name =
+    run.protocolName
+      .toLowerCase()
+      .replaceAll(/[^a-z0-9]+/g, '-')
+      .replaceAll(/^-|-$/g, '')
+      .slice(0, 40) || 'run';
   const day = isoOf(run.startedAt ?? run.createdAt).slice(0, 10);
   res.set('Content-Disposition', `attachment; filename="evenfall-${day}-${name}-${run.id.slice(0, 8)}${ending}"`);
 }

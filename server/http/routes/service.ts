@@ -10,10 +10,19 @@ import { softwareVersion } from '../software';
 
 const openApi = JSON.stringify(openApiOf(routes, softwareVersion));
 
-const protocolSchema = JSON.stringify({ $id: '/api/schemas/protocol-1.json', title: 'Evenfall protocol, format 1', ...z.toJSONSchema(protocolDocumentSchema, { target: 'draft-2020-12', io: 'input' }) });
+const protocolSchema = JSON.stringify({
+  $id: '/api/schemas/protocol-1.json',
+  title: 'Evenfall protocol, format 1',
+  ...z.toJSONSchema(protocolDocumentSchema, { target: 'draft-2020-12', io: 'input' }),
+});
 
 export const serviceRoutes = [
-  mount(contracts.getHealth, async ({ services }) => ({ ok: await ping(services.database), version: softwareVersion, serverAt: isoOf(services.clock.utcMs()), demo: services.config.demo })),
+  mount(contracts.getHealth, async ({ services }) => ({
+    ok: await ping(services.database),
+    version: softwareVersion,
+    serverAt: isoOf(services.clock.utcMs()),
+    demo: services.config.demo,
+  })),
 
   mount(contracts.getOpenApi, ({ res }) => {
     res.set('Cache-Control', 'no-cache').type('application/json').send(openApi);

@@ -22,13 +22,23 @@ export async function workRehearsal(services: Services, job: Job): Promise<void>
   try {
     const records = await services.tasks.rehearse({ start: { ...run.start, simulated }, startUtcMs: run.createdAt });
     for (const series of records.channels) {
-      const channel = await findOrMakeChannel(db, { labId, rigId: run.rigId, runId, ...series.info, source: 'simulated', createdAt: services.clock.utcMs() });
+      const channel = await findOrMakeChannel(db, {
+        labId,
+        rigId: run.rigId,
+        runId,
+        ...series.info,
+        source: 'simulated',
+        createdAt: services.clock.utcMs(),
+      });
       await services.samples.append(labId, channel.id, { utcMs: series.utcMs, value: series.value });
     }
     await storeRehearsal(db, run, records);
   } catch (error) {
     if (job.attempt < job.maxAttempts) throw error;
-    await markRunFailed(db, run, { why: `The rehearsal came to no end: ${error instanceof Error ? error.message : String(error)}`, nowUtcMs: services.clock.utcMs() });
+    await markRunFailed(db, run, {
+      why: `The rehearsal came to no end: ${error instanceof Error ? error.message : String(error)}`,
+      nowUtcMs: services.clock.utcMs(),
+    });
     services.log.error({ err: error, runId }, 'a rehearsal failed');
   }
   const done = await findRun(db, labId, runId);

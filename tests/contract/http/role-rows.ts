@@ -30,11 +30,15 @@ export const shortProtocol = (name: string): ProtocolDocument => ({
   formatVersion: 1,
   name,
   steps: [
-    { kind: 'home' }, { kind: 'swing', to: 'near' }, { kind: 'dwell', for_s: 60 }, { kind: 'swing', to: 'far' }, { kind: 'dwell', for_s: 60 },
+    { kind: 'home' },
+    { kind: 'swing', to: 'near' },
+    { kind: 'dwell', for_s: 60 },
+    { kind: 'swing', to: 'far' },
+    { kind: 'dwell', for_s: 60 },
   ],
 });
 
-export const mapping = { delimiter: ',', decimal: '.', headerRow: true, timeColumn: 0, timeFormat: 'iso', valueColumn: 1, unit: 'urad' } as const;
+const mapping = { delimiter: ',', decimal: '.', headerRow: true, timeColumn: 0, timeFormat: 'iso', valueColumn: 1, unit: 'urad' } as const;
 
 const lab = ({ labId }: Things) => ({ labId });
 const rig = ({ labId, rigId }: Things) => ({ labId, rigId });
@@ -64,9 +68,18 @@ export const rows: Readonly<Record<string, Row>> = {
   removeMember: { params: ({ labId }) => ({ labId, userId: nobody }), allowed: 404 },
   listAudit: { params: lab, allowed: 200 },
   listRigs: { params: lab, allowed: 200 },
-  createRig: { params: lab, body: () => ({ name: 'Another bench', document: demoRigWide, link: { kind: 'serial', path: '/dev/null' } }), allowed: 422 },
+  createRig: {
+    params: lab,
+    body: () => ({ name: 'Another bench', document: demoRigWide, link: { kind: 'serial', path: '/dev/null' } }),
+    allowed: 422,
+  },
   getRig: { params: rig, allowed: 200 },
-  reviseRig: { params: rig, body: () => ({ name: 'North bench', document: demoRigWide, reason: 'again' }), ifMatch: () => '"77"', allowed: 412 },
+  reviseRig: {
+    params: rig,
+    body: () => ({ name: 'North bench', document: demoRigWide, reason: 'again' }),
+    ifMatch: () => '"77"',
+    allowed: 412,
+  },
   listRigRevisions: { params: rig, allowed: 200 },
   changeLink: { params: rig, body: () => ({ kind: 'serial', path: '/dev/null' }), allowed: 422 },
   tryLink: { params: rig, body: () => ({ kind: 'simulated' }), allowed: 200 },

@@ -35,7 +35,9 @@ afterAll(() => lab.stop());
 async function thingsOf(userId: string, { labId, rigId }: { labId: string; rigId: string }): Promise<Things> {
   const ask = (method: string, path: string) => lab.as({ userId }, method, `/labs/${labId}${path}`);
   const rig = await ask('GET', `/rigs/${rigId}`).expect(200);
-  const protocol = await ask('POST', '/protocols').send({ document: shortProtocol('There and back') }).expect(201);
+  const protocol = await ask('POST', '/protocols')
+    .send({ document: shortProtocol('There and back') })
+    .expect(201);
   const protocolEtag = protocol.headers.etag as string;
   await ask('POST', `/protocols/${protocol.body.id}/revisions`).set('If-Match', protocolEtag).send({ rigId }).expect(201);
   const run = await ask('POST', '/rehearsals').send({ rigId, protocolId: protocol.body.id, revision: 1 }).expect(202);
@@ -43,9 +45,20 @@ async function thingsOf(userId: string, { labId, rigId }: { labId: string; rigId
   const evaluation = await ask('POST', `/runs/${run.body.id}/evaluations`).send({}).expect(202);
   const file = await ask('POST', `/runs/${run.body.id}/imports`).send({ fileName: 'deflection.csv' }).expect(201);
   await ask('PUT', `/imports/${file.body.id}/content`).set('Content-Type', 'text/csv').send(rows.putImportContent?.raw).expect(200);
-  const invitation = await ask('POST', '/invitations').send({ email: `guest.${labId}@quillfen.example`, role: 'viewer' }).expect(201);
+  const invitation = await ask('POST', '/invitations')
+    .send({ email: `guest.${labId}@quillfen.example`, role: 'viewer' })
+    .expect(201);
   return {
-    labId, rigId, massSetId: rig.body.massSets[0].id, protocolId: protocol.body.id, protocolEtag, runId: run.body.id, importId: file.body.id, evaluationId: evaluation.body.id, invitationId: invitation.body.id, userId,
+    labId,
+    rigId,
+    massSetId: rig.body.massSets[0].id,
+    protocolId: protocol.body.id,
+    protocolEtag,
+    runId: run.body.id,
+    importId: file.body.id,
+    evaluationId: evaluation.body.id,
+    invitationId: invitation.body.id,
+    userId,
   };
 }
 
@@ -60,11 +73,20 @@ const rowOf = (contract: RouteContract): Row => {
   return row;
 };
 
-async function send(contract: RouteContract, cookie: string, { things = own, row = rowOf(contract) }: { things?: Things; row?: Row } = {}): Promise<Answer> {
+async function send(
+  contract: RouteContract,
+  cookie: string,
+  { things = own, row = rowOf(contract) }: { things?: Things; row?: Row } = {},
+): Promise<Answer> {
   const params = row.params?.(things) ?? {};
   const path = contract.path.replaceAll(/:(\w+)/g, (_, name: string) => encodeURIComponent(params[name] ?? ''));
   const query = row.query === undefined ? '' : `?${new URLSearchParams(row.query(things)).toString()}`;
-  const headers: Record<string, string> = { cookie, origin: address, 'idempotency-key': crypto.randomUUID(), ...(row.ifMatch === undefined ? {} : { 'if-match': row.ifMatch(things) }) };
+  const headers: Record<string, string> = {
+    cookie,
+    origin: address,
+    'idempotency-key': crypto.randomUUID(),
+    ...(row.ifMatch === undefined ? {} : { 'if-match': row.ifMatch(things) }),
+  };
   const body = row.raw ?? (row.body === undefined ? null : JSON.stringify(row.body(things)));
   if (body !== null) headers['content-type'] = row.raw === undefined ? 'application/json' : 'text/csv';
   const controller = new AbortController();
@@ -108,7 +130,9 @@ test('Express answers the routes of the contracts and no others', () => {
     handle?: { stack?: Layer[] };
   }
   const api = (lab.built.app as unknown as { router: { stack: Layer[] } }).router.stack.flatMap(({ handle }) => handle?.stack ?? []);
-  const mounted = api.flatMap(({ route }) => (route === undefined ? [] : Object.keys(route.methods).map((method) => `${method.toUpperCase()} ${route.path}`)));
+  const mounted = api.flatMap(({ route }) =>
+    route === undefined ? [] : Object.keys(route.methods).map((method) => `${method.toUpperCase()} ${route.path}`),
+  );
   const described = routes.map(({ method, path }) => `${method} ${path}`);
   expect(mounted.filter((entry) => !['GET /{*rest}', 'GET /:code'].includes(entry)).sort()).toEqual(described.sort());
 });
@@ -138,7 +162,9 @@ describe.each(cases)('%s', (_name, contract) => {
     expectProblem(await send(contract, lab.cookie({ userId: stranger[role] })), 'not-found');
   });
 
-  const named = [...contract.path.matchAll(/:(\w+)/g)].map(([, name]) => name as string).filter((name) => name !== 'labId' && name !== 'revision');
+  const named = [...contract.path.matchAll(/:(\w+)/g)]
+    .map(([, name]) => name as string)
+    .filter((name) => name !== 'labId' && name !== 'revision');
   if (named.length === 0) return;
 
   test('ids of another lab under the own lab are unknown', async () => {
@@ -153,8 +179,17 @@ test('things of another lab named in a body are unknown', async () => {
     const answer = await lab.as('owner', 'POST', `/labs/${own.labId}/runs`).send({ ...start, ...change });
     expectProblem(answer, 'not-found');
   }
-  expectProblem(await lab.as('owner', 'POST', `/labs/${own.labId}/rehearsals`).send({ rigId: foreign.rigId, protocolId: own.protocolId }), 'not-found');
-  expectProblem(await lab.as('owner', 'POST', `/labs/${own.labId}/protocols/${own.protocolId}/revisions`).set('If-Match', own.protocolEtag).send({ rigId: foreign.rigId }), 'not-found');
+  expectProblem(
+    await lab.as('owner', 'POST', `/labs/${own.labId}/rehearsals`).send({ rigId: foreign.rigId, protocolId: own.protocolId }),
+    'not-found',
+  );
+  expectProblem(
+    await lab
+      .as('owner', 'POST', `/labs/${own.labId}/protocols/${own.protocolId}/revisions`)
+      .set('If-Match', own.protocolEtag)
+      .send({ rigId: foreign.rigId }),
+    'not-found',
+  );
 });
 
 test('every property that a body does not know is refused', async () => {
@@ -163,6 +198,10 @@ test('every property that a body does not know is refused', async () => {
     const row = rowOf(contract);
     const spoilt = { ...row, body: (things: Things) => ({ ...(row.body?.(things) as object), isOwner: true }) };
     const answer = await send(contract, lab.cookie('owner'), { row: spoilt });
-    expect({ route: contract.name, status: answer.status, body: answer.body }).toMatchObject({ route: contract.name, status: 400, body: { code: 'invalid-input' } });
+    expect({ route: contract.name, status: answer.status, body: answer.body }).toMatchObject({
+      route: contract.name,
+      status: 400,
+      body: { code: 'invalid-input' },
+    });
   }
 });

@@ -3,11 +3,23 @@ import { ConfigError, readConfig } from '@/server/boot/config';
 const least = { DATABASE_URL: 'postgres://somebody@127.0.0.1/evenfall' };
 
 test('one variable is enough; the rest has defaults', () => {
-  expect(readConfig(least)).toMatchObject({ mode: 'development', host: '127.0.0.1', port: 4460, publicUrl: null, demo: false, trustedProxies: 0, smtpUrl: null, limits: { streamsPerUser: 6, importBytes: 256 * 1_048_576 } });
+  expect(readConfig(least)).toMatchObject({
+    mode: 'development',
+    host: '127.0.0.1',
+    port: 4460,
+    publicUrl: null,
+    demo: false,
+    trustedProxies: 0,
+    smtpUrl: null,
+    limits: { streamsPerUser: 6, importBytes: 256 * 1_048_576 },
+  });
 });
 
 test('an empty variable counts as absent, an address loses its last slash', () => {
-  expect(readConfig({ ...least, PORT: '', EVENFALL_PUBLIC_URL: 'https://balance.quillfen.example/' })).toMatchObject({ port: 4460, publicUrl: 'https://balance.quillfen.example' });
+  expect(readConfig({ ...least, PORT: '', EVENFALL_PUBLIC_URL: 'https://balance.quillfen.example/' })).toMatchObject({
+    port: 4460,
+    publicUrl: 'https://balance.quillfen.example',
+  });
 });
 
 test('everything that is wrong is named at once, with what it may be', () => {

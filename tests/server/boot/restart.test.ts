@@ -78,7 +78,11 @@ test('a run saved by another version of the engine is left alone, blocks its rig
   await lab.services.idle();
   await database().connection.pool.query('update runs set chart_version = 99 where id = $1', [runId]);
   await restart(1_000);
-  expect(await lab.view(runId)).toMatchObject({ state: 'held', reason: expect.stringContaining('another version of the run engine (99'), mayResume: { ok: false } });
+  expect(await lab.view(runId)).toMatchObject({
+    state: 'held',
+    reason: expect.stringContaining('another version of the run engine (99'),
+    mayResume: { ok: false },
+  });
   expect((await lab.intervene(runId, 'resume').expect(409)).body.detail).toContain('Look at the rig');
   const protocolId = await lab.issue(quickProtocol());
   await lab.arm();
@@ -104,7 +108,10 @@ test('a rehearsal in its worker thread that the end of the server cuts off is do
   const { world } = lab;
   await lab.stop();
   lab = await LabServer.start(database(), { world, overrides: { tasks: undefined } });
-  const asked = await lab.as('operator', 'POST', `/labs/${demoIds.lab}/rehearsals`).send({ rigId: demoIds.rig, protocolId, revision: 1 }).expect(202);
+  const asked = await lab
+    .as('operator', 'POST', `/labs/${demoIds.lab}/rehearsals`)
+    .send({ rigId: demoIds.rig, protocolId, revision: 1 })
+    .expect(202);
   const runId = asked.body.id as string;
   await lab.stop();
   await world.clock.advance(10_000);
@@ -116,7 +123,10 @@ test('a rehearsal in its worker thread that the end of the server cuts off is do
 test('the worker thread gives the same rehearsal as the thread of the tests', async () => {
   const protocolId = await lab.issue(quickProtocol());
   const ask = async () => {
-    const asked = await lab.as('operator', 'POST', `/labs/${demoIds.lab}/rehearsals`).send({ rigId: demoIds.rig, protocolId, revision: 1, seed: 5 }).expect(202);
+    const asked = await lab
+      .as('operator', 'POST', `/labs/${demoIds.lab}/rehearsals`)
+      .send({ rigId: demoIds.rig, protocolId, revision: 1, seed: 5 })
+      .expect(202);
     await lab.services.idle();
     await lab.advance(31_000);
     const samples = await lab.as('viewer', 'GET', `${runs}/${asked.body.id as string}/samples?points=4000`).expect(200);

@@ -23,12 +23,26 @@ beforeAll(async () => {
 }, 60_000);
 afterAll(() => lab.stop());
 
-const mapping: ImportMapping = { delimiter: ',', decimal: '.', headerRow: true, timeColumn: 0, timeFormat: 'iso', valueColumn: 1, unit: 'urad' };
+const mapping: ImportMapping = {
+  delimiter: ',',
+  decimal: '.',
+  headerRow: true,
+  timeColumn: 0,
+  timeFormat: 'iso',
+  valueColumn: 1,
+  unit: 'urad',
+};
 
 /** Half a hertz of deflection over the whole run. */
 function deflection(change: (line: string, index: number) => string | null = (line) => line): string {
-  const lines = Array.from({ length: Math.floor((endUtcMs - startUtcMs) / 2000) }, (_, index) => `${new Date(startUtcMs + 2000 * index).toISOString()},${(100 * Math.sin(index / 40)).toFixed(3)}`);
-  return `time_utc,deflection_urad\n${lines.map(change).filter((line) => line !== null).join('\n')}\n`;
+  const lines = Array.from(
+    { length: Math.floor((endUtcMs - startUtcMs) / 2000) },
+    (_, index) => `${new Date(startUtcMs + 2000 * index).toISOString()},${(100 * Math.sin(index / 40)).toFixed(3)}`,
+  );
+  return `time_utc,deflection_urad\n${lines
+    .map(change)
+    .filter((line) => line !== null)
+    .join('\n')}\n`;
 }
 
 async function begin(fileName = 'night.csv'): Promise<string> {
@@ -36,11 +50,17 @@ async function begin(fileName = 'night.csv'): Promise<string> {
   return answer.body.id as string;
 }
 
-const put = (importId: string, text: string | Buffer, type = 'text/csv') => lab.as('analyst', 'PUT', `${labPath}/imports/${importId}/content`).set('Content-Type', type).send(text);
-const check = (importId: string, change: Partial<ImportMapping> = {}) => lab.as('analyst', 'POST', `${labPath}/imports/${importId}/check`).send({ mapping: { ...mapping, ...change } });
-const commit = (importId: string, channelName: string, change: Partial<ImportMapping> = {}) => lab.as('analyst', 'POST', `${labPath}/imports/${importId}/commit`).send({ mapping: { ...mapping, ...change }, channelName });
+const put = (importId: string, text: string | Buffer, type = 'text/csv') =>
+  lab.as('analyst', 'PUT', `${labPath}/imports/${importId}/content`).set('Content-Type', type).send(text);
+const check = (importId: string, change: Partial<ImportMapping> = {}) =>
+  lab.as('analyst', 'POST', `${labPath}/imports/${importId}/check`).send({ mapping: { ...mapping, ...change } });
+const commit = (importId: string, channelName: string, change: Partial<ImportMapping> = {}) =>
+  lab.as('analyst', 'POST', `${labPath}/imports/${importId}/commit`).send({ mapping: { ...mapping, ...change }, channelName });
 const samplesOf = async (channelName: string): Promise<number> => {
-  const result = await database().connection.pool.query<{ n: string }>("select count(*) as n from samples join channels on channels.id = samples.channel_id where channels.name = $1 and channels.source = 'import'", [channelName]);
+  const result = await database().connection.pool.query<{ n: string }>(
+    "select count(*) as n from samples join channels on channels.id = samples.channel_id where channels.name = $1 and channels.source = 'import'",
+    [channelName],
+  );
   return Number(result.rows[0]?.n);
 };
 const sent = async (text: string) => {
@@ -54,21 +74,41 @@ describe('a deflection file', () => {
     const text = deflection();
     const id = await begin();
     const received = await put(id, text).expect(200);
-    expect(received.body).toMatchObject({ state: 'received', bytes: text.length, sha256: createHash('sha256').update(text).digest('hex'), fileName: 'night.csv' });
+    expect(received.body).toMatchObject({
+      state: 'received',
+      bytes: text.length,
+      sha256: createHash('sha256').update(text).digest('hex'),
+      fileName: 'night.csv',
+    });
     expect(received.body.preview).toMatchObject({ mapping, ambiguous: [], columns: [{ name: 'time_utc' }, { name: 'deflection_urad' }] });
 
     const rows = text.trim().split('\n').length - 1;
     const checked = await check(id).expect(200);
-    expect(checked.body).toMatchObject({ ok: true, rows, problems: [], problemCount: 0, medianIntervalS: 2, firstAt: new Date(startUtcMs).toISOString(), overlap: expect.stringMatching(/^covers (9\d|100) % of the run$/) });
+    expect(checked.body).toMatchObject({
+      ok: true,
+      rows,
+      problems: [],
+      problemCount: 0,
+      medianIntervalS: 2,
+      firstAt: new Date(startUtcMs).toISOString(),
+      overlap: expect.stringMatching(/^covers (9\d|100) % of the run$/),
+    });
     expect(await samplesOf('readout')).toBe(0);
 
     const stored = await commit(id, 'readout').expect(200);
-    expect(stored.body).toMatchObject({ stored: rows, known: 0, channel: { name: 'readout', unit: 'urad', role: 'deflection', source: 'import' } });
+    expect(stored.body).toMatchObject({
+      stored: rows,
+      known: 0,
+      channel: { name: 'readout', unit: 'urad', role: 'deflection', source: 'import' },
+    });
     const shown = await lab.as('viewer', 'GET', `${labPath}/runs/${runId}/samples?channelId=${stored.body.channel.id}`).expect(200);
     expect(shown.body.total).toBe(rows);
     expect(shown.body.utcMs[1]).toBe(startUtcMs + 2000);
     expect(shown.body.value[1]).toBe(Number((100 * Math.sin(1 / 40)).toFixed(3)));
-    const kept = await database().connection.pool.query<{ bytes: Buffer }>('select bytes from import_pieces where import_id = $1 order by number', [id]);
+    const kept = await database().connection.pool.query<{ bytes: Buffer }>(
+      'select bytes from import_pieces where import_id = $1 order by number',
+      [id],
+    );
     expect(Buffer.concat(kept.rows.map(({ bytes }) => bytes)).toString()).toBe(text);
 
     await put(id, text).expect(409);
@@ -78,14 +118,19 @@ describe('a deflection file', () => {
   test('sent again is known: nothing is stored twice, and other values at the same instants are refused', async () => {
     const again = await commit(await sent(deflection()), 'readout').expect(200);
     expect(again.body).toMatchObject({ stored: 0, known: expect.any(Number) });
-    const other = await commit(await sent(deflection((line, index) => (index === 5 ? line.replace(/,.*/, ',99') : line))), 'readout').expect(409);
+    const other = await commit(
+      await sent(deflection((line, index) => (index === 5 ? line.replace(/,.*/, ',99') : line))),
+      'readout',
+    ).expect(409);
     expect(other.body.detail).toContain(`holds another value at ${new Date(startUtcMs + 10_000).toISOString()}`);
   });
 
   test('goes into no channel that the rig fills itself, nor into one of another unit', async () => {
     const id = await sent(deflection());
     expect((await commit(id, 'deflection').expect(409)).body.errors[0].path).toBe('channelName');
-    expect((await commit(id, 'readout', { unit: 'mrad' }).expect(409)).body.detail).toContain('The channel readout is in urad, the file in mrad');
+    expect((await commit(id, 'readout', { unit: 'mrad' }).expect(409)).body.detail).toContain(
+      'The channel readout is in urad, the file in mrad',
+    );
   });
 
   test('of several megabytes in small pieces comes whole', async () => {
@@ -101,15 +146,30 @@ describe('bad input', () => {
   const cases: [string, (line: string, index: number) => string | null, Partial<ImportMapping>, string | RegExp][] = [
     ['NaN in a row', (line, index) => (index === 3 ? line.replace(/,.*/, ',NaN') : line), {}, 'the value is NaN'],
     ['a value missing', (line, index) => (index === 3 ? line.replace(/,.*/, ',') : line), {}, 'the value is empty'],
-    ['a column missing', (line, index) => (index === 3 ? (line.split(',')[0] ?? '') : line), {}, 'the row has 1 columns, the mapping needs 2'],
-    ['two ways of writing time', (line, index) => (index === 3 ? `1928866000,${line.split(',')[1] ?? ''}` : line), {}, 'all rows must be written in one way'],
+    [
+      'a column missing',
+      (line, index) => (index === 3 ? (line.split(',')[0] ?? '') : line),
+      {},
+      'the row has 1 columns, the mapping needs 2',
+    ],
+    [
+      'two ways of writing time',
+      (line, index) => (index === 3 ? `1928866000,${line.split(',')[1] ?? ''}` : line),
+      {},
+      'all rows must be written in one way',
+    ],
     ['an instant twice', (line, index) => (index === 3 ? `${line}\n${line}` : line), {}, 'comes twice'],
     ['time that goes back', (line, index) => (index === 3 ? `2031-02-14T20:00:00Z,1` : line), {}, 'the time goes back'],
     ['a value no pendulum reaches', (line, index) => (index === 3 ? line.replace(/,.*/, ',90000') : line), {}, 'is the unit right?'],
     ['a wrong column in the mapping', (line) => line, { valueColumn: 7 }, 'the mapping names column 8, but the file has 2 columns'],
     ['the wrong unit', (line) => line, { unit: 'rad' }, 'the pendulum can move 0.06 rad at most'],
     ['the wrong time format', (line) => line, { timeFormat: 'epoch-s' }, 'is written as a date, but the mapping says seconds since 1970'],
-    ['data of another night', (line) => line.replace('2031-02-14', '2031-02-12'), {}, /the data end 48 h before the run began: are time format, zone and start of the mapping right\?/],
+    [
+      'data of another night',
+      (line) => line.replace('2031-02-14', '2031-02-12'),
+      {},
+      /the data end 48 h before the run began: are time format, zone and start of the mapping right\?/,
+    ],
   ];
 
   test.each(cases)('%s is found by row, and nothing is stored', async (...[, change, how, words]) => {
@@ -121,8 +181,12 @@ describe('bad input', () => {
     expect(refused.body).toMatchObject({ code: 'unreadable-data', detail: expect.stringMatching(/^Nothing was stored/) });
     expect(refused.body.errors[0].message).toMatch(words);
     expect(await samplesOf('spoilt')).toBe(0);
-    expect((await lab.as('viewer', 'GET', `${labPath}/rigs/${demoIds.rig}/channels`)).body.items.map(({ name }: { name: string }) => name)).not.toContain('spoilt');
-    expect((await lab.as('analyst', 'POST', `${labPath}/imports/${id}/check`).send({ mapping: { ...mapping, ...how } })).body.ok).toBe(false);
+    expect(
+      (await lab.as('viewer', 'GET', `${labPath}/rigs/${demoIds.rig}/channels`)).body.items.map(({ name }: { name: string }) => name),
+    ).not.toContain('spoilt');
+    expect((await lab.as('analyst', 'POST', `${labPath}/imports/${id}/check`).send({ mapping: { ...mapping, ...how } })).body.ok).toBe(
+      false,
+    );
   });
 
   test('a problem in the last of many rows leaves the channel as it was', async () => {
@@ -160,7 +224,12 @@ describe('bad input', () => {
     const flood = new ReadableStream<Uint8Array>({
       pull: (controller) => controller.enqueue(Buffer.from('2031-02-14T21:00:00Z,1\n'.repeat(5000))),
     });
-    const response = await fetch(`${address}/api${labPath}/imports/${id}/content`, { method: 'PUT', body: flood, duplex: 'half', headers: { 'content-type': 'text/csv', cookie: lab.cookie('analyst'), origin: address } } as RequestInit).catch((error: Error) => error);
+    const response = await fetch(`${address}/api${labPath}/imports/${id}/content`, {
+      method: 'PUT',
+      body: flood,
+      duplex: 'half',
+      headers: { 'content-type': 'text/csv', cookie: lab.cookie('analyst'), origin: address },
+    } as RequestInit).catch((error: Error) => error);
     if (response instanceof Response) expect(response.status).toBe(413);
     const pieces = await database().connection.pool.query('select 1 from import_pieces where import_id = $1', [id]);
     expect(pieces.rowCount).toBe(0);

@@ -16,7 +16,10 @@ afterAll(() => lab.stop());
 const labPath = `/labs/${demoIds.lab}`;
 const ask = (runId: string, body: object = {}) => lab.as('analyst', 'POST', `${labPath}/runs/${runId}/evaluations`).send(body);
 const rehearse = async (body: object) => {
-  const asked = await lab.as('operator', 'POST', `${labPath}/rehearsals`).send({ rigId: demoIds.rig, protocolId: demoIds.shortProtocol, revision: 1, ...body }).expect(202);
+  const asked = await lab
+    .as('operator', 'POST', `${labPath}/rehearsals`)
+    .send({ rigId: demoIds.rig, protocolId: demoIds.shortProtocol, revision: 1, ...body })
+    .expect(202);
   await lab.services.idle();
   await lab.advance(31_000);
   return lab.view(asked.body.id as string);
@@ -24,7 +27,14 @@ const rehearse = async (body: object) => {
 
 test('a rehearsal of the short protocol is stored like a run, and its evaluation gives back the G it was made with', async () => {
   const run = await rehearse({ seed: 3 });
-  expect(run).toMatchObject({ state: 'finished', rehearsal: true, protocolRevision: 1, dwellsDone: 12, dwellsPlanned: 12, simulated: { trueG: CODATA_2022_G.value, seed: 3 } });
+  expect(run).toMatchObject({
+    state: 'finished',
+    rehearsal: true,
+    protocolRevision: 1,
+    dwellsDone: 12,
+    dwellsPlanned: 12,
+    simulated: { trueG: CODATA_2022_G.value, seed: 3 },
+  });
   const queued = await ask(run.id).expect(202);
   expect(queued.body).toMatchObject({ state: 'queued', channel: 'deflection', createdBy: 'Tam Ferrowdale', result: null });
   await lab.services.idle();
@@ -58,7 +68,10 @@ test('a run that has not ended, a channel without data, a run without deflection
   const runId = await lab.run(quickProtocol());
   expect((await ask(runId).expect(409)).body.detail).toMatch(/^The run is (starting|running)\. Wait for its end, or stop it\.$/);
   await lab.until(runId, 'finished');
-  expect((await ask(runId, { channel: 'spot' }).expect(422)).body).toMatchObject({ code: 'cannot-evaluate', detail: 'The channel "spot" has no deflection within this run; these have: deflection.' });
+  expect((await ask(runId, { channel: 'spot' }).expect(422)).body).toMatchObject({
+    code: 'cannot-evaluate',
+    detail: 'The channel "spot" has no deflection within this run; these have: deflection.',
+  });
   await lab.services.idle();
   await database().connection.pool.query('delete from samples');
   expect((await ask(runId).expect(422)).body.detail).toBe('No deflection lies within this run. Bring the file of the readout in first.');
@@ -69,7 +82,10 @@ test('a rehearsal of a draft, and one that is refused', async () => {
   const run = await rehearse({ protocolId: made.body.id, revision: undefined });
   expect(run).toMatchObject({ state: 'finished', protocolRevision: 0 });
   expect((await lab.as('viewer', 'GET', `${labPath}/rigs/${demoIds.rig}`)).body.activeRun).toBeNull();
-  const lost = await lab.as('operator', 'POST', `${labPath}/protocols`).send({ document: quickProtocol({ steps: [{ kind: 'swing', to: 'nowhere' }] }) }).expect(201);
+  const lost = await lab
+    .as('operator', 'POST', `${labPath}/protocols`)
+    .send({ document: quickProtocol({ steps: [{ kind: 'swing', to: 'nowhere' }] }) })
+    .expect(201);
   await lab.as('operator', 'POST', `${labPath}/rehearsals`).send({ rigId: demoIds.rig, protocolId: lost.body.id }).expect(422);
   expect((await lab.intervene(run.id, 'hold').expect(409)).body.detail).toContain('A rehearsal runs by itself');
 });

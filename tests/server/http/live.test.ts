@@ -26,7 +26,11 @@ afterEach(async () => {
 });
 
 async function follow(runId: string, headers: Record<string, string> = {}, who: 'viewer' | 'owner' = 'viewer'): Promise<LiveReader> {
-  const reader = await LiveReader.open(`${address}/api/labs/${demoIds.lab}/runs/${runId}/live`, { cookie: lab.cookie(who), 'accept-encoding': 'gzip', ...headers });
+  const reader = await LiveReader.open(`${address}/api/labs/${demoIds.lab}/runs/${runId}/live`, {
+    cookie: lab.cookie(who),
+    'accept-encoding': 'gzip',
+    ...headers,
+  });
   open.push(reader);
   return reader;
 }
@@ -39,7 +43,11 @@ test('begins with the whole, as an uncompressed stream that says how to come bac
   const runId = await lab.run(quickProtocol());
   const reader = await follow(runId);
   await reader.until(({ events }) => events.length > 0);
-  expect(reader.response.headers).toMatchObject({ 'content-type': 'text/event-stream; charset=utf-8', 'cache-control': 'no-store', 'x-accel-buffering': 'no' });
+  expect(reader.response.headers).toMatchObject({
+    'content-type': 'text/event-stream; charset=utf-8',
+    'cache-control': 'no-store',
+    'x-accel-buffering': 'no',
+  });
   expect(reader.response.headers['content-encoding']).toBeUndefined();
   expect(reader.retryMs).toBe(2000);
   const [first] = reader.events;
@@ -55,8 +63,19 @@ test('tells each event once with its number, the rows, the samples and a beat ea
   await lab.until(runId, 'finished');
   await reader.until(() => viewOf(reader).state === 'finished');
   expect(seqsOf(reader)).toEqual(range(from + 1, viewOf(reader).lastSeq));
-  const rows = new Map(reader.of('step').map(({ data }) => liveMessageSchemas.step.parse(data)).map((row) => [row.seq, row]));
-  expect([...rows.values()].map(({ path, outcome }) => [path, outcome])).toEqual([['1.home', 'done'], ['2.swing', 'done'], ['3.dwell', 'done'], ['4.swing', 'done'], ['5.dwell', 'done']]);
+  const rows = new Map(
+    reader
+      .of('step')
+      .map(({ data }) => liveMessageSchemas.step.parse(data))
+      .map((row) => [row.seq, row]),
+  );
+  expect([...rows.values()].map(({ path, outcome }) => [path, outcome])).toEqual([
+    ['1.home', 'done'],
+    ['2.swing', 'done'],
+    ['3.dwell', 'done'],
+    ['4.swing', 'done'],
+    ['5.dwell', 'done'],
+  ]);
 
   const beats = reader.of('beat').map(({ data }) => liveMessageSchemas.beat.parse(data));
   const times = beats.map(({ serverAt }) => Date.parse(serverAt));
@@ -106,7 +125,12 @@ test('comes back with the rows of the steps that ended meanwhile', async () => {
   await lab.until(runId, 'finished');
   const again = await follow(runId, { 'last-event-id': String(lastId) });
   await again.until(() => viewOf(again) !== undefined);
-  expect(again.of('step').map(({ data }) => liveMessageSchemas.step.parse(data)).map(({ path, outcome }) => `${path} ${String(outcome)}`)).toEqual(['1.home done', '2.swing done', '3.dwell done', '4.swing done', '5.dwell done']);
+  expect(
+    again
+      .of('step')
+      .map(({ data }) => liveMessageSchemas.step.parse(data))
+      .map(({ path, outcome }) => `${path} ${String(outcome)}`),
+  ).toEqual(['1.home done', '2.swing done', '3.dwell done', '4.swing done', '5.dwell done']);
 });
 
 test('a number that is not of this run is answered with the whole', async () => {
@@ -137,7 +161,9 @@ test('ends with the session, and with the membership', async () => {
   await database().connection.pool.query("delete from memberships where role = 'viewer'");
   await lab.advance(31_000);
   await again.untilEnded();
-  await database().connection.pool.query(`insert into memberships (lab_id, user_id, role, since) values ('${demoIds.lab}', '${demoPeople.find(({ role }) => role === 'viewer')?.id ?? ''}', 'viewer', now())`);
+  await database().connection.pool.query(
+    `insert into memberships (lab_id, user_id, role, since) values ('${demoIds.lab}', '${demoPeople.find(({ role }) => role === 'viewer')?.id ?? ''}', 'viewer', now())`,
+  );
 });
 
 test('six at a time and person; the seventh is told why', async () => {

@@ -13,20 +13,41 @@ afterAll(() => lab.stop());
 
 const protocols = `/labs/${demoIds.lab}/protocols`;
 const document = (name: string, to: string = 'near'): ProtocolDocument => ({
-  formatVersion: 1, name, steps: [{ kind: 'home' }, { kind: 'repeat', times: 2, steps: [{ kind: 'swing', to }, { kind: 'dwell', for_s: 600 }] }],
+  formatVersion: 1,
+  name,
+  steps: [
+    { kind: 'home' },
+    {
+      kind: 'repeat',
+      times: 2,
+      steps: [
+        { kind: 'swing', to },
+        { kind: 'dwell', for_s: 600 },
+      ],
+    },
+  ],
 });
 
 const make = async (name: string, of: ProtocolDocument = document(name)) => {
   const answer = await lab.as('operator', 'POST', protocols).send({ document: of }).expect(201);
   return { id: answer.body.id as string, etag: answer.headers.etag as string, body: answer.body };
 };
-const save = ({ id, etag }: { id: string; etag: string }, of: ProtocolDocument, who: 'operator' | 'keeper' = 'operator') => lab.as(who, 'PUT', `${protocols}/${id}`).set('If-Match', etag).send({ document: of });
-const issue = (id: string, etag: string) => lab.as('operator', 'POST', `${protocols}/${id}/revisions`).set('If-Match', etag).send({ rigId: demoIds.rig, note: 'for tonight' });
+const save = ({ id, etag }: { id: string; etag: string }, of: ProtocolDocument, who: 'operator' | 'keeper' = 'operator') =>
+  lab.as(who, 'PUT', `${protocols}/${id}`).set('If-Match', etag).send({ document: of });
+const issue = (id: string, etag: string) =>
+  lab.as('operator', 'POST', `${protocols}/${id}/revisions`).set('If-Match', etag).send({ rigId: demoIds.rig, note: 'for tonight' });
 
 describe('a draft', () => {
   test('is made, read, saved and deleted; counts its steps and nested ones', async () => {
     const made = await make('Two pairs');
-    expect(made.body).toMatchObject({ name: 'Two pairs', latestRevision: null, draftDiffers: true, stepCount: 4, updatedBy: 'Ilse Marrowby', revisions: [] });
+    expect(made.body).toMatchObject({
+      name: 'Two pairs',
+      latestRevision: null,
+      draftDiffers: true,
+      stepCount: 4,
+      updatedBy: 'Ilse Marrowby',
+      revisions: [],
+    });
     const read = await lab.as('viewer', 'GET', `${protocols}/${made.id}`).expect(200);
     expect(read.headers.etag).toBe(made.etag);
     const saved = await save(made, document('Two pairs, far', 'far')).expect(200);
@@ -41,7 +62,12 @@ describe('a draft', () => {
     await lab.advance(60_000);
     await save(made, document('Shared', 'far'), 'keeper').expect(200);
     const second = await save(made, document('Mine')).expect(412);
-    const clock = new Intl.DateTimeFormat('en-GB', { timeZone: 'Europe/Zurich', hour: '2-digit', minute: '2-digit', second: '2-digit' }).format(lab.clock.utcMs());
+    const clock = new Intl.DateTimeFormat('en-GB', {
+      timeZone: 'Europe/Zurich',
+      hour: '2-digit',
+      minute: '2-digit',
+      second: '2-digit',
+    }).format(lab.clock.utcMs());
     expect(second.body).toMatchObject({ code: 'edited-meanwhile' });
     expect(second.body.detail).toContain(`Casimir Thornquist saved this protocol at ${clock} Fri, Europe/Zurich`);
     expect((await lab.as('operator', 'GET', `${protocols}/${made.id}`)).body.name).toBe('Shared');
@@ -59,7 +85,10 @@ describe('a draft', () => {
   });
 
   test('with an unknown field is refused at its place', async () => {
-    const answer = await lab.as('operator', 'POST', protocols).send({ document: { ...document('Odd'), steps: [{ kind: 'swing', to: 'near', speed: 3 }] } }).expect(400);
+    const answer = await lab
+      .as('operator', 'POST', protocols)
+      .send({ document: { ...document('Odd'), steps: [{ kind: 'swing', to: 'near', speed: 3 }] } })
+      .expect(400);
     expect(answer.body.errors[0].path).toBe('document.steps.0.speed');
   });
 });
@@ -68,14 +97,22 @@ describe('a revision', () => {
   test('is issued from the draft, numbered, hashed over the canonical document, and never changes', async () => {
     const made = await make('Issued');
     const first = await issue(made.id, made.etag).expect(201);
-    expect(first.body).toMatchObject({ number: 1, note: 'for tonight', issuedBy: 'Ilse Marrowby', document: document('Issued'), sha256: sha256(canonicalize(document('Issued')) ?? '') });
+    expect(first.body).toMatchObject({
+      number: 1,
+      note: 'for tonight',
+      issuedBy: 'Ilse Marrowby',
+      document: document('Issued'),
+      sha256: sha256(canonicalize(document('Issued')) ?? ''),
+    });
     expect((await lab.as('viewer', 'GET', `${protocols}/${made.id}`)).body).toMatchObject({ latestRevision: 1, draftDiffers: false });
     const saved = await save(made, document('Issued', 'far')).expect(200);
     expect(saved.body.draftDiffers).toBe(true);
     const second = await issue(made.id, saved.headers.etag as string).expect(201);
     expect(second.body.number).toBe(2);
     expect((await lab.as('viewer', 'GET', `${protocols}/${made.id}/revisions/1`).expect(200)).body).toEqual(first.body);
-    await expect(database().connection.pool.query(`update protocol_revisions set note = 'x' where protocol_id = '${made.id}'`)).rejects.toThrow('never changed');
+    await expect(
+      database().connection.pool.query(`update protocol_revisions set note = 'x' where protocol_id = '${made.id}'`),
+    ).rejects.toThrow('never changed');
     await lab.as('operator', 'DELETE', `${protocols}/${made.id}`).expect(409);
   });
 
@@ -106,6 +143,7 @@ describe('a revision', () => {
   });
 
   test('with a number that is none is unknown', async () => {
-    for (const number of ['9', 'x', '1.5', '99999999999999999999']) await lab.as('viewer', 'GET', `${protocols}/${demoIds.shortProtocol}/revisions/${number}`).expect(404);
+    for (const number of ['9', 'x', '1.5', '99999999999999999999'])
+      await lab.as('viewer', 'GET', `${protocols}/${demoIds.shortProtocol}/revisions/${number}`).expect(404);
   });
 });

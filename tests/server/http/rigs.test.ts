@@ -16,14 +16,27 @@ const hour = 3_600_000;
 const inHours = (hours: number) => new Date(lab.clock.utcMs() + hours * hour).toISOString();
 const arm = (body: object) => lab.as('operator', 'POST', `${rig}/arm`).send({ name: 'Ilse Marrowby', cautionsRead: true, ...body });
 const armOf = async () => (await lab.as('viewer', 'GET', rig).expect(200)).body.arm;
-const auditKinds = async () => (await lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`).expect(200)).body.items.map(({ kind }: { kind: string }) => kind);
+const auditKinds = async () =>
+  (await lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`).expect(200)).body.items.map(({ kind }: { kind: string }) => kind);
 
 describe('a rig', () => {
   test('shows its line, its turntable and its mass sets', async () => {
     const { body } = await lab.as('viewer', 'GET', rig).expect(200);
     expect(body).toMatchObject({
-      name: 'North bench', revision: 1, link: { kind: 'simulated' }, arm: null, activeRun: null,
-      live: { condition: 'ready', positionKnown: true, angleDeg: 0, moving: false, interlockClosed: true, supplyPresent: true, discardedLines: 0 },
+      name: 'North bench',
+      revision: 1,
+      link: { kind: 'simulated' },
+      arm: null,
+      activeRun: null,
+      live: {
+        condition: 'ready',
+        positionKnown: true,
+        angleDeg: 0,
+        moving: false,
+        interlockClosed: true,
+        supplyPresent: true,
+        discardedLines: 0,
+      },
     });
     expect(Math.abs(Date.parse(body.live.lastReplyAt) - lab.clock.utcMs())).toBeLessThan(2000);
     expect(body.massSets.map(({ label }: { label: string }) => label)).toEqual(['Lead spheres, 1.6 kg', 'Empty control']);
@@ -31,20 +44,30 @@ describe('a rig', () => {
 
   test('gets a new revision; earlier ones stay, and whoever edits an old one is told who was faster', async () => {
     const before = await lab.as('keeper', 'GET', rig).expect(200);
-    const revise = (etag: string, reason: string) => lab.as('keeper', 'PUT', `${rig}/document`).set('If-Match', etag).send({ name: 'North bench', document: { ...demoRigWide, noise: { readout_rad: 2e-5 } }, reason });
+    const revise = (etag: string, reason: string) =>
+      lab
+        .as('keeper', 'PUT', `${rig}/document`)
+        .set('If-Match', etag)
+        .send({ name: 'North bench', document: { ...demoRigWide, noise: { readout_rad: 2e-5 } }, reason });
     const after = await revise(before.headers.etag as string, 'New camera').expect(200);
     expect(after.body).toMatchObject({ revision: 2, document: { noise: { readout_rad: 2e-5 } } });
     const late = await revise(before.headers.etag as string, 'Another camera').expect(412);
     expect(late.body.detail).toContain('Casimir Thornquist made revision 2 of North bench after you opened it ("New camera"');
     const all = await lab.as('viewer', 'GET', `${rig}/revisions`).expect(200);
-    expect(all.body.items.map(({ number, reason }: { number: number; reason: string }) => [number, reason])).toEqual([[2, 'New camera'], [1, 'First measurement of the rig']]);
+    expect(all.body.items.map(({ number, reason }: { number: number; reason: string }) => [number, reason])).toEqual([
+      [2, 'New camera'],
+      [1, 'First measurement of the rig'],
+    ]);
     expect(all.body.items[1].document).toEqual(demoRigWide);
     await lab.advance(5_000);
     expect((await lab.as('viewer', 'GET', rig)).body.live.condition).toBe('ready');
   });
 
   test('is added with its first mass set and a line of its own, which fills a channel', async () => {
-    const made = await lab.as('keeper', 'POST', rigs).send({ name: 'South bench', document: demoRigWide, link: { kind: 'simulated' } }).expect(201);
+    const made = await lab
+      .as('keeper', 'POST', rigs)
+      .send({ name: 'South bench', document: demoRigWide, link: { kind: 'simulated' } })
+      .expect(201);
     expect(made.body.massSets).toHaveLength(1);
     // The lease of a rig that is added to a running server is taken at once.
     await lab.advance(40_000);
@@ -59,7 +82,14 @@ describe('a rig', () => {
     const add = (label: string) => lab.as('keeper', 'POST', `${rig}/mass-sets`).send({ label, sources: { shape: 'none' } });
     await add('Bare').expect(201);
     expect((await add('Bare').expect(409)).body.detail).toContain('a mass set called "Bare" already');
-    expect((await lab.as('keeper', 'POST', `${rig}/mass-sets`).send({ label: 'Half', sources: { shape: 'sphere' } }).expect(400)).body.errors.map(({ path }: { path: string }) => path)).toEqual(['sources.mass', 'sources.radius', 'sources.orbit']);
+    expect(
+      (
+        await lab
+          .as('keeper', 'POST', `${rig}/mass-sets`)
+          .send({ label: 'Half', sources: { shape: 'sphere' } })
+          .expect(400)
+      ).body.errors.map(({ path }: { path: string }) => path),
+    ).toEqual(['sources.mass', 'sources.radius', 'sources.orbit']);
   });
 });
 
@@ -74,7 +104,11 @@ describe('the line', () => {
   });
 
   test('that leads nowhere is tried and explained', async () => {
-    const answer = lab.as('keeper', 'POST', `${rig}/link/try`).send({ kind: 'serial', path: '/tmp/no-turntable-here' }).expect(200).then(({ body }) => body as unknown);
+    const answer = lab
+      .as('keeper', 'POST', `${rig}/link/try`)
+      .send({ kind: 'serial', path: '/tmp/no-turntable-here' })
+      .expect(200)
+      .then(({ body }) => body as unknown);
     for (let turn = 0; turn < 200; turn += 1) await lab.advance(100);
     expect(await answer).toEqual({ ok: false, detail: expect.stringContaining('There is no port /tmp/no-turntable-here'), firmware: null });
   });
@@ -110,7 +144,9 @@ describe('arming', () => {
     happen();
     await lab.advance(10_000);
     expect(await armOf()).toBeNull();
-    const ended = (await lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`)).body.items.find(({ kind }: { kind: string }) => kind === 'rig.arm-ended');
+    const ended = (await lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`)).body.items.find(
+      ({ kind }: { kind: string }) => kind === 'rig.arm-ended',
+    );
     expect(ended).toMatchObject({ who: 'the run engine', data: { why: expect.stringContaining(word) } });
     undo();
     await lab.advance(5_000);
@@ -119,21 +155,27 @@ describe('arming', () => {
   test('is refused while the interlock is open', async () => {
     lab.world.controller(demoIds.rig).openInterlock();
     await lab.advance(2_000);
-    expect((await arm({ until: inHours(2) }).expect(409)).body).toMatchObject({ code: 'not-ready', detail: expect.stringContaining('interlock of North bench is open') });
+    expect((await arm({ until: inHours(2) }).expect(409)).body).toMatchObject({
+      code: 'not-ready',
+      detail: expect.stringContaining('interlock of North bench is open'),
+    });
     lab.world.controller(demoIds.rig).closeInterlock();
     await lab.advance(2_000);
   });
 });
 
 describe('start checks', () => {
-  const checks = async (query = `protocolId=${demoIds.shortProtocol}&revision=1`) => (await lab.as('viewer', 'GET', `${rig}/start-checks?${query}`).expect(200)).body;
+  const checks = async (query = `protocolId=${demoIds.shortProtocol}&revision=1`) =>
+    (await lab.as('viewer', 'GET', `${rig}/start-checks?${query}`).expect(200)).body;
   const stateOf = async (code: string) => (await checks()).checks.find((check: { code: string }) => check.code === code);
 
   test('say what is missing and when the run would finish', async () => {
     await lab.advance(40_000);
     const report = await checks();
     expect(report.mayStart).toBe(false);
-    expect(report.checks.filter(({ state }: { state: string }) => state === 'fail').map(({ code }: { code: string }) => code)).toEqual(['armed']);
+    expect(report.checks.filter(({ state }: { state: string }) => state === 'fail').map(({ code }: { code: string }) => code)).toEqual([
+      'armed',
+    ]);
     // home, then 6 x (far, near) at a beat of 2 periods of 420 s and the settling swing: 12 x 840 s and little more
     expect(report.durationS).toBeGreaterThan(12 * 840);
     expect(report.durationS).toBeLessThan(12 * 840 + 60);

@@ -41,7 +41,10 @@ describe('a start', () => {
     const protocolId = await lab.issue(quickProtocol());
     expect((await lab.askStart(protocolId).expect(409)).body).toMatchObject({ code: 'not-armed', errors: [{ path: 'armed' }] });
     await lab.arm(0.02);
-    expect((await lab.askStart(protocolId).expect(409)).body).toMatchObject({ code: 'not-armed', detail: expect.stringContaining('arm it for longer') });
+    expect((await lab.askStart(protocolId).expect(409)).body).toMatchObject({
+      code: 'not-armed',
+      detail: expect.stringContaining('arm it for longer'),
+    });
     expect((await lab.as('viewer', 'GET', `${runs}?active=true`)).body.items).toEqual([]);
   });
 
@@ -83,7 +86,10 @@ describe('a start', () => {
     lab.world.controller(demoIds.rig).openInterlock();
     await lab.advance(2_000);
     const answer = await lab.askStart(protocolId).expect(409);
-    expect(answer.body).toMatchObject({ code: 'not-ready', errors: expect.arrayContaining([expect.objectContaining({ path: 'interlock' })]) });
+    expect(answer.body).toMatchObject({
+      code: 'not-ready',
+      errors: expect.arrayContaining([expect.objectContaining({ path: 'interlock' })]),
+    });
     lab.world.controller(demoIds.rig).closeInterlock();
     await lab.advance(2_000);
   });
@@ -93,14 +99,25 @@ describe('a run', () => {
   test('goes through its steps, is listed, logged and archived, and its chain holds', async () => {
     const runId = await lab.run(quickProtocol({ name: 'Whole' }));
     const running = await lab.until(runId, 'running');
-    expect(running).toMatchObject({ protocolName: 'Whole', operator: 'Ilse Marrowby', massSetLabel: 'Lead spheres, 1.6 kg', dwellsPlanned: 2, rehearsal: false, simulated: null });
+    expect(running).toMatchObject({
+      protocolName: 'Whole',
+      operator: 'Ilse Marrowby',
+      massSetLabel: 'Lead spheres, 1.6 kg',
+      dwellsPlanned: 2,
+      rehearsal: false,
+      simulated: null,
+    });
     const rig = await lab.as('viewer', 'GET', `/labs/${demoIds.lab}/rigs/${demoIds.rig}`);
     expect(rig.body.activeRun).toEqual({ id: runId, state: 'running', protocolName: 'Whole' });
     await lab.as('viewer', 'GET', `${runs}/${runId}/archive.zip`).expect(409);
 
     await lab.until(runId, 'finished');
     expect((await stepsOf(runId)).map(({ path, outcome, station }) => [path, outcome, station])).toEqual([
-      ['1.home', 'done', expect.any(String)], ['2.swing', 'done', 'near'], ['3.dwell', 'done', 'near'], ['4.swing', 'done', 'far'], ['5.dwell', 'done', 'far'],
+      ['1.home', 'done', expect.any(String)],
+      ['2.swing', 'done', 'near'],
+      ['3.dwell', 'done', 'near'],
+      ['4.swing', 'done', 'far'],
+      ['5.dwell', 'done', 'far'],
     ]);
     const view = await lab.view(runId);
     expect(view).toMatchObject({ state: 'finished', dwellsDone: 2, reason: '', current: null, mayResume: { ok: false } });
@@ -122,11 +139,14 @@ describe('a run', () => {
     expect(csv.text.trim().split('\n')).toHaveLength(6);
 
     await lab.services.idle();
-    const zip = await lab.as('viewer', 'GET', `${runs}/${runId}/archive.zip`).buffer(true).parse((res, done) => {
-      const chunks: Buffer[] = [];
-      res.on('data', (chunk: Buffer) => chunks.push(chunk));
-      res.on('end', () => done(null, Buffer.concat(chunks)));
-    });
+    const zip = await lab
+      .as('viewer', 'GET', `${runs}/${runId}/archive.zip`)
+      .buffer(true)
+      .parse((res, done) => {
+        const chunks: Buffer[] = [];
+        res.on('data', (chunk: Buffer) => chunks.push(chunk));
+        res.on('end', () => done(null, Buffer.concat(chunks)));
+      });
     const archive = readArchive(new Map(Object.entries(unzipSync(zip.body as Buffer))), sha256Hex);
     expect(archive.steps).toHaveLength(5);
     expect(archive.warnings).toEqual([]);
@@ -138,7 +158,12 @@ describe('a run', () => {
     const held = await lab.intervene(runId, 'hold', { who: 'viewer' }).expect(202);
     expect(held.body).toEqual({ runId, serverAt: iso(0) });
     const view = await lab.until(runId, 'held');
-    expect(view.intervention).toMatchObject({ kind: 'hold', by: 'Pim Oldershaw', serverAt: held.body.serverAt, confirmedAt: expect.any(String) });
+    expect(view.intervention).toMatchObject({
+      kind: 'hold',
+      by: 'Pim Oldershaw',
+      serverAt: held.body.serverAt,
+      confirmedAt: expect.any(String),
+    });
     expect(view.mayResume).toEqual({ ok: true, why: '' });
     await lab.intervene(runId, 'hold', { who: 'viewer' }).expect(202);
 
@@ -150,14 +175,26 @@ describe('a run', () => {
     const stopped = await lab.intervene(runId, 'stop', { who: 'analyst' }).expect(202);
     await lab.until(runId, 'stopped');
     const end = await lab.view(runId);
-    expect(end.intervention).toMatchObject({ kind: 'stop', by: 'Tam Ferrowdale', serverAt: stopped.body.serverAt, confirmedAt: expect.any(String) });
+    expect(end.intervention).toMatchObject({
+      kind: 'stop',
+      by: 'Tam Ferrowdale',
+      serverAt: stopped.body.serverAt,
+      confirmedAt: expect.any(String),
+    });
     expect((await stepsOf(runId)).map(({ outcome }) => outcome)).toContain('cut short');
 
     await lab.intervene(runId, 'stop').expect(202);
     expect((await lab.intervene(runId, 'hold').expect(409)).body.detail).toBe('The run is over: it was stopped.');
     expect((await lab.intervene(runId, 'resume').expect(409)).body.code).toBe('not-possible-now');
     const audit = await lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`);
-    expect(audit.body.items.map(({ kind, who }: { kind: string; who: string }) => `${kind} ${who}`)).toEqual(expect.arrayContaining(['run.started Ilse Marrowby', 'run.hold-asked Pim Oldershaw', 'run.resumed Ilse Marrowby', 'run.stop-asked Tam Ferrowdale']));
+    expect(audit.body.items.map(({ kind, who }: { kind: string; who: string }) => `${kind} ${who}`)).toEqual(
+      expect.arrayContaining([
+        'run.started Ilse Marrowby',
+        'run.hold-asked Pim Oldershaw',
+        'run.resumed Ilse Marrowby',
+        'run.stop-asked Tam Ferrowdale',
+      ]),
+    );
   });
 
   test('holds after this dwell when asked to', async () => {
@@ -218,7 +255,11 @@ describe('hold and stop', () => {
       Object.assign(pool, working);
       await lab.advance(10_000);
     });
-    expect((await lab.until(runId, 'stopped')).intervention).toMatchObject({ kind: 'stop', by: 'Pim Oldershaw', confirmedAt: expect.any(String) });
+    expect((await lab.until(runId, 'stopped')).intervention).toMatchObject({
+      kind: 'stop',
+      by: 'Pim Oldershaw',
+      confirmedAt: expect.any(String),
+    });
   });
 
   test('of a session that ended are refused', async () => {
@@ -237,7 +278,9 @@ describe('the list', () => {
     const paged: string[] = [];
     let cursor: string | null = null;
     do {
-      const page: { body: { items: { id: string }[]; next: string | null } } = await lab.as('viewer', 'GET', `${runs}?limit=3${cursor === null ? '' : `&cursor=${cursor}`}`).expect(200);
+      const page: { body: { items: { id: string }[]; next: string | null } } = await lab
+        .as('viewer', 'GET', `${runs}?limit=3${cursor === null ? '' : `&cursor=${cursor}`}`)
+        .expect(200);
       paged.push(...page.body.items.map(({ id }) => id));
       cursor = page.body.next;
     } while (cursor !== null);

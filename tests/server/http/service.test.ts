@@ -14,7 +14,11 @@ beforeAll(async () => {
 afterAll(() => lab.stop());
 
 test('health tells whether the database answers', async () => {
-  expect((await lab.as('viewer', 'GET', '/health').expect(200)).body).toMatchObject({ ok: true, demo: true, serverAt: new Date(lab.clock.utcMs()).toISOString() });
+  expect((await lab.as('viewer', 'GET', '/health').expect(200)).body).toMatchObject({
+    ok: true,
+    demo: true,
+    serverAt: new Date(lab.clock.utcMs()).toISOString(),
+  });
   const { pool } = lab.services.database;
   const query = pool.query.bind(pool);
   Object.assign(pool, { query: () => Promise.reject(new Error('gone')) });
@@ -25,7 +29,9 @@ test('health tells whether the database answers', async () => {
 test('the OpenAPI description holds every route, and each of its schemas is valid JSON Schema 2020-12', async () => {
   const { body } = await lab.as('viewer', 'GET', '/openapi.json').expect(200);
   expect(body.openapi).toBe('3.1.0');
-  const operations = Object.values(body.paths as Record<string, Record<string, { operationId: string }>>).flatMap((path) => Object.values(path).map(({ operationId }) => operationId));
+  const operations = Object.values(body.paths as Record<string, Record<string, { operationId: string }>>).flatMap((path) =>
+    Object.values(path).map(({ operationId }) => operationId),
+  );
   expect(operations.sort()).toEqual(routes.map(({ name }) => name).sort());
   expect(body.paths['/api/labs/{labId}/runs'].post['x-roles']).toEqual(['owner', 'keeper', 'operator']);
 
@@ -35,7 +41,8 @@ test('the OpenAPI description holds every route, and each of its schemas is vali
   expect(refs.size).toBeGreaterThan(3);
   for (const ref of refs) expect(() => ajv.compile({ $ref: `api${ref}` })).not.toThrow();
   const validate = ajv.compile({ $ref: 'api#/components/schemas/ProtocolDocument' });
-  for (const template of templates) expect({ id: template.id, valid: validate(template.make(demoRigWide)), errors: validate.errors }).toMatchObject({ valid: true });
+  for (const template of templates)
+    expect({ id: template.id, valid: validate(template.make(demoRigWide)), errors: validate.errors }).toMatchObject({ valid: true });
 });
 
 test('the schema of the protocol document takes the templates and refuses what the format does not know', async () => {

@@ -1,9 +1,17 @@
-import fc from 'fast-check';
+import * as fc from 'fast-check';
 import { readCsv, type CsvLimits } from '@/server/ingest/csv-read';
 import type { SampleBatch } from '@/server/interfaces/sample-store';
 import type { ImportMapping } from '@/shared/contracts/data';
 
-const mapping: ImportMapping = { delimiter: ',', decimal: '.', headerRow: true, timeColumn: 0, timeFormat: 'iso', valueColumn: 1, unit: 'urad' };
+const mapping: ImportMapping = {
+  delimiter: ',',
+  decimal: '.',
+  headerRow: true,
+  timeColumn: 0,
+  timeFormat: 'iso',
+  valueColumn: 1,
+  unit: 'urad',
+};
 const limits: CsvLimits = { greatestSpan: null, nowUtcMs: Date.UTC(2031, 3, 1) };
 
 async function* pieces(text: string, size = 7): AsyncGenerator<Uint8Array> {
@@ -13,7 +21,11 @@ async function* pieces(text: string, size = 7): AsyncGenerator<Uint8Array> {
 
 async function read(text: string, change: Partial<ImportMapping> = {}, more: Partial<CsvLimits> = {}) {
   const batches: SampleBatch[] = [];
-  const reading = await readCsv(pieces(text), { mapping: { ...mapping, ...change }, limits: { ...limits, ...more }, take: async (batch) => void batches.push(batch) });
+  const reading = await readCsv(pieces(text), {
+    mapping: { ...mapping, ...change },
+    limits: { ...limits, ...more },
+    take: async (batch) => void batches.push(batch),
+  });
   return { ...reading, utcMs: batches.flatMap((batch) => [...batch.utcMs]), value: batches.flatMap((batch) => [...batch.value]) };
 }
 
@@ -31,33 +43,100 @@ describe('reading a deflection CSV', () => {
     ['a value missing', `${header}${row(0, '')}`, {}, { row: 2, column: 'deflection_urad', message: 'the value is empty' }],
     ['NaN', `${header}${row(0, '1')}${row(1, 'NaN')}`, {}, { row: 3, column: 'deflection_urad', message: 'the value is NaN' }],
     ['a word', `${header}${row(0, 'high')}`, {}, { row: 2, column: 'deflection_urad', message: '"high" is no number: write it like 12.5' }],
-    ['the other decimal sign', `${header}2031-03-14T22:00:00Z,"1,5"\n`, {}, { row: 2, column: 'deflection_urad', message: 'it has the decimal sign ","' }],
-    ['a thousands separator', `${header}2031-03-14T22:00:00Z,"1,234.5"\n`, {}, { row: 2, column: 'deflection_urad', message: 'without thousands separators' }],
-    ['too few columns', `${header}2031-03-14T22:00:00Z\n`, {}, { row: 2, column: null, message: 'the row has 1 columns, the mapping needs 2' }],
-    ['a column the file does not have', header + row(0, '1'), { valueColumn: 5 }, { row: 1, column: null, message: 'the mapping names column 6, but the file has 2 columns: time_utc, deflection_urad' }],
+    [
+      'the other decimal sign',
+      `${header}2031-03-14T22:00:00Z,"1,5"\n`,
+      {},
+      { row: 2, column: 'deflection_urad', message: 'it has the decimal sign ","' },
+    ],
+    [
+      'a thousands separator',
+      `${header}2031-03-14T22:00:00Z,"1,234.5"\n`,
+      {},
+      { row: 2, column: 'deflection_urad', message: 'without thousands separators' },
+    ],
+    [
+      'too few columns',
+      `${header}2031-03-14T22:00:00Z\n`,
+      {},
+      { row: 2, column: null, message: 'the row has 1 columns, the mapping needs 2' },
+    ],
+    [
+      'a column the file does not have',
+      header + row(0, '1'),
+      { valueColumn: 5 },
+      { row: 1, column: null, message: 'the mapping names column 6, but the file has 2 columns: time_utc, deflection_urad' },
+    ],
     ['an instant twice', `${header}${row(1, '1')}${row(1, '2')}`, {}, { row: 3, column: 'time_utc', message: 'comes twice' }],
-    ['time going back', `${header}${row(5, '1')}${row(4, '2')}`, {}, { row: 3, column: 'time_utc', message: 'the time goes back from 2031-03-14T22:00:05.000Z to 2031-03-14T22:00:04.000Z' }],
+    [
+      'time going back',
+      `${header}${row(5, '1')}${row(4, '2')}`,
+      {},
+      { row: 3, column: 'time_utc', message: 'the time goes back from 2031-03-14T22:00:05.000Z to 2031-03-14T22:00:04.000Z' },
+    ],
     ['no zone', `${header}2031-03-14T22:00:00,1\n`, {}, { row: 2, column: 'time_utc', message: 'names no zone' }],
-    ['two ways of writing time', `${header}${row(0, '1')}1931724001,2\n`, {}, { row: 3, column: 'time_utc', message: 'is not ISO 8601: the mapping says ISO 8601, and all rows must be written in one way' }],
-    ['a date among numbers', `${header}1931724000,1\n${row(1, '1')}`, { timeFormat: 'epoch-s' }, { row: 3, column: 'time_utc', message: 'is written as a date, but the mapping says seconds since 1970' }],
-    ['a local date', `${header}03/04/2031 22:00,1\n`, {}, { row: 2, column: 'time_utc', message: 'reads differently in different countries' }],
-    ['a day that does not exist', `${header}2031-02-30T22:00:00Z,1\n`, {}, { row: 2, column: 'time_utc', message: 'does not exist in the calendar' }],
-    ['milliseconds read as seconds', `${header}1931724000000,1\n`, { timeFormat: 'epoch-s' }, { row: 2, column: 'time_utc', message: 'is the time format of the mapping right?' }],
+    [
+      'two ways of writing time',
+      `${header}${row(0, '1')}1931724001,2\n`,
+      {},
+      { row: 3, column: 'time_utc', message: 'is not ISO 8601: the mapping says ISO 8601, and all rows must be written in one way' },
+    ],
+    [
+      'a date among numbers',
+      `${header}1931724000,1\n${row(1, '1')}`,
+      { timeFormat: 'epoch-s' },
+      { row: 3, column: 'time_utc', message: 'is written as a date, but the mapping says seconds since 1970' },
+    ],
+    [
+      'a local date',
+      `${header}03/04/2031 22:00,1\n`,
+      {},
+      { row: 2, column: 'time_utc', message: 'reads differently in different countries' },
+    ],
+    [
+      'a day that does not exist',
+      `${header}2031-02-30T22:00:00Z,1\n`,
+      {},
+      { row: 2, column: 'time_utc', message: 'does not exist in the calendar' },
+    ],
+    [
+      'milliseconds read as seconds',
+      `${header}1931724000000,1\n`,
+      { timeFormat: 'epoch-s' },
+      { row: 2, column: 'time_utc', message: 'is the time format of the mapping right?' },
+    ],
     ['the future', `${header}2031-05-14T22:00:00Z,1\n`, {}, { row: 2, column: 'time_utc', message: 'lies in the future' }],
-    ['an open quotation', `${header}${row(0, '1')}"2031-03-14T22:00:01Z,2\n${row(2, '3')}`, {}, { row: 4, column: null, message: 'a quotation mark is opened and never closed' }],
+    [
+      'an open quotation',
+      `${header}${row(0, '1')}"2031-03-14T22:00:01Z,2\n${row(2, '3')}`,
+      {},
+      { row: 4, column: null, message: 'a quotation mark is opened and never closed' },
+    ],
     ['nothing at all', header, {}, { row: null, column: null, message: 'there is no row of data' }],
-  ])('says where %s is', async (_name, text, change, problem) => {
+  ])('says where %s is', async (...[, text, change, problem]) => {
     const { problems } = await read(text, change);
     expect(problems[0]).toEqual({ ...problem, message: expect.stringContaining(problem.message) });
   });
 
   it('refuses values farther apart than the pendulum can turn', async () => {
     const { problems } = await read(`${header}${row(0, '10')}${row(1, '30')}${row(2, '70100')}`, {}, { greatestSpan: 60_000 });
-    expect(problems).toEqual([{ row: 4, column: 'deflection_urad', message: 'the value 70100 urad lies 70100 urad from the first one, and the pendulum can move 60000 urad at most: is the unit right?' }]);
+    expect(problems).toEqual([
+      {
+        row: 4,
+        column: 'deflection_urad',
+        message:
+          'the value 70100 urad lies 70100 urad from the first one, and the pendulum can move 60000 urad at most: is the unit right?',
+      },
+    ]);
   });
 
   it('counts every problem and keeps the first hundred', async () => {
-    const text = header + Array.from({ length: 150 }, (_, index) => `2031-03-14T22:${String(Math.floor(index / 60)).padStart(2, '0')}:${String(index % 60).padStart(2, '0')}Z,x\n`).join('');
+    const text =
+      header +
+      Array.from(
+        { length: 150 },
+        (_, index) => `2031-03-14T22:${String(Math.floor(index / 60)).padStart(2, '0')}:${String(index % 60).padStart(2, '0')}Z,x\n`,
+      ).join('');
     const reading = await read(text);
     expect(reading.problems).toHaveLength(100);
     expect(reading.problemCount).toBe(150);
@@ -65,31 +144,51 @@ describe('reading a deflection CSV', () => {
   });
 
   it('counts elapsed time from the stated instant, with the decimal comma where stated', async () => {
-    const reading = await read('t;v\n0,5;1,25\n1,5;-3\n', { delimiter: ';', decimal: ',', timeFormat: 'elapsed-s', elapsedFrom: '2031-03-14T22:00:00Z' });
-    expect(reading).toMatchObject({ problemCount: 0, value: [1.25, -3], utcMs: [Date.UTC(2031, 2, 14, 22) + 500, Date.UTC(2031, 2, 14, 22) + 1500] });
+    const reading = await read('t;v\n0,5;1,25\n1,5;-3\n', {
+      delimiter: ';',
+      decimal: ',',
+      timeFormat: 'elapsed-s',
+      elapsedFrom: '2031-03-14T22:00:00Z',
+    });
+    expect(reading).toMatchObject({
+      problemCount: 0,
+      value: [1.25, -3],
+      utcMs: [Date.UTC(2031, 2, 14, 22) + 500, Date.UTC(2031, 2, 14, 22) + 1500],
+    });
   });
 
   it('gives back what was written, wherever the stream is cut and however lines end', async () => {
     const samples = fc.array(fc.double({ noNaN: true, noDefaultInfinity: true }), { minLength: 1, maxLength: 40 });
     await fc.assert(
-      fc.asyncProperty(samples, fc.integer({ min: 1, max: 50 }), fc.constantFrom('\n', '\r\n'), fc.boolean(), async (values, size, end, quoted) => {
-        const quote = quoted ? '"' : '';
-        const text = `\ufeff${header.trim()}${end}${values.map((value, index) => `${quote}${String(1_931_724_000 + index)}${quote},${String(value)}`).join(end)}`;
-        const taken: number[] = [];
-        const reading = await readCsv(pieces(text, size), { mapping: { ...mapping, timeFormat: 'epoch-s' }, limits, take: async (batch) => void taken.push(...batch.value) });
-        expect(reading.problems).toEqual([]);
-        expect(taken).toEqual(values.map((value) => value + 0));
-      }),
+      fc.asyncProperty(
+        samples,
+        fc.record({ size: fc.integer({ min: 1, max: 50 }), end: fc.constantFrom('\n', '\r\n'), quoted: fc.boolean() }),
+        async (values, { size, end, quoted }) => {
+          const quote = quoted ? '"' : '';
+          const text = `\ufeff${header.trim()}${end}${values.map((value, index) => `${quote}${String(1_931_724_000 + index)}${quote},${String(value)}`).join(end)}`;
+          const taken: number[] = [];
+          const reading = await readCsv(pieces(text, size), {
+            mapping: { ...mapping, timeFormat: 'epoch-s' },
+            limits,
+            take: async (batch) => void taken.push(...batch.value),
+          });
+          expect(reading.problems).toEqual([]);
+          expect(taken).toEqual(values.map((value) => value + 0));
+        },
+      ),
       { numRuns: 200 },
     );
   });
 
   it('never throws, whatever the bytes', async () => {
     await fc.assert(
-      fc.asyncProperty(fc.string({ unit: fc.constantFrom(',', '"', '\n', '\r', '1', '.', 'N', 'Z', ' ', ';', '#', 'é', '-') , maxLength: 200 }), async (text) => {
-        const reading = await readCsv(pieces(text), { mapping: { ...mapping, timeFormat: 'epoch-s' }, limits });
-        expect(reading.problemCount + reading.rows).toBeGreaterThan(0);
-      }),
+      fc.asyncProperty(
+        fc.string({ unit: fc.constantFrom(',', '"', '\n', '\r', '1', '.', 'N', 'Z', ' ', ';', '#', 'é', '-'), maxLength: 200 }),
+        async (text) => {
+          const reading = await readCsv(pieces(text), { mapping: { ...mapping, timeFormat: 'epoch-s' }, limits });
+          expect(reading.problemCount + reading.rows).toBeGreaterThan(0);
+        },
+      ),
       { numRuns: 500 },
     );
   });

@@ -4,10 +4,23 @@ const sniff = (text: string) => sniffCsv(Buffer.from(text), true);
 
 describe('the guess at how a CSV is to be read', () => {
   it('takes comma, point, header, ISO time and the unit in the name', () => {
-    const { mapping, ambiguous, columns } = sniff('time_utc,deflection_urad\n2031-03-14T22:00:00.000Z,12.5\n2031-03-14T22:00:00.100Z,12.6\n');
-    expect(mapping).toEqual({ delimiter: ',', decimal: '.', headerRow: true, timeColumn: 0, timeFormat: 'iso', valueColumn: 1, unit: 'urad' });
+    const { mapping, ambiguous, columns } = sniff(
+      'time_utc,deflection_urad\n2031-03-14T22:00:00.000Z,12.5\n2031-03-14T22:00:00.100Z,12.6\n',
+    );
+    expect(mapping).toEqual({
+      delimiter: ',',
+      decimal: '.',
+      headerRow: true,
+      timeColumn: 0,
+      timeFormat: 'iso',
+      valueColumn: 1,
+      unit: 'urad',
+    });
     expect(ambiguous).toEqual([]);
-    expect(columns).toEqual([{ index: 0, name: 'time_utc', sample: '2031-03-14T22:00:00.000Z' }, { index: 1, name: 'deflection_urad', sample: '12.5' }]);
+    expect(columns).toEqual([
+      { index: 0, name: 'time_utc', sample: '2031-03-14T22:00:00.000Z' },
+      { index: 1, name: 'deflection_urad', sample: '12.5' },
+    ]);
   });
 
   it('takes semicolons with the decimal comma', () => {
@@ -40,7 +53,10 @@ describe('the guess at how a CSV is to be read', () => {
   it('passes over a byte order mark, comments and blank lines', () => {
     const { mapping, rows } = sniff('\ufeff# made by hand\n\ntime_utc,theta_mrad\r\n2031-03-14T22:00:00Z,1\r\n');
     expect(mapping).toMatchObject({ headerRow: true, unit: 'mrad' });
-    expect(rows).toEqual([['time_utc', 'theta_mrad'], ['2031-03-14T22:00:00Z', '1']]);
+    expect(rows).toEqual([
+      ['time_utc', 'theta_mrad'],
+      ['2031-03-14T22:00:00Z', '1'],
+    ]);
   });
 
   it.each([
@@ -63,7 +79,15 @@ describe('the guess at how a CSV is to be read', () => {
   });
 
   it.each([
-    ['deflection (µrad)', 'urad'], ['deflection [μrad]', 'urad'], ['theta_rad', 'rad'], ['spot mm', 'mm'], ['position/m', 'm'], ['angle (mrad)', 'mrad'], ['deflection', null], ['form', null], ['temperature_K', null],
+    ['deflection (µrad)', 'urad'],
+    ['deflection [μrad]', 'urad'],
+    ['theta_rad', 'rad'],
+    ['spot mm', 'mm'],
+    ['position/m', 'm'],
+    ['angle (mrad)', 'mrad'],
+    ['deflection', null],
+    ['form', null],
+    ['temperature_K', null],
   ])('reads the unit of %j as %s', (name, unit) => {
     expect(unitOf(name)).toBe(unit);
   });

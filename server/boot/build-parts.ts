@@ -1,0 +1,28 @@
+import type { Logger } from 'pino';
+import type { Clock } from '../interfaces/clock';
+import type { HeavyTasks } from '../interfaces/heavy-tasks';
+import type { MailPort } from '../interfaces/mail';
+import type { StationRig } from '../interfaces/rig-stations';
+import type { ServerConfig } from '../interfaces/server-config';
+import type { SimulatedController } from '../links/simulated-controller';
+import type { Connection } from '../store/database';
+
+export interface BuildParts {
+  database: Connection;
+  clock: Clock;
+  config: ServerConfig;
+  overrides?: BuildOverrides;
+}
+
+export interface BuildOverrides {
+  mail?: MailPort;
+  log?: Logger;
+  /** Heavy work without worker threads. */
+  tasks?: HeavyTasks;
+  /** A simulated controller that outlives this server, as a real one does. */
+  controllerOf?: (rig: StationRig) => SimulatedController;
+  /** How often jobs are looked for and samples are stored, ms; default once a second. Tests on a clock of their own save the database work. */
+  paceMs?: number;
+  /** Whether chores run at their UTC times; they follow the machine's clock, whatever `clock` is. */
+  ticks?: boolean;
+}

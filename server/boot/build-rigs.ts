@@ -1,0 +1,112 @@
+import { randomBytes, randomUUID } from 'node:crypto';
+import { join } from 'node:path';
+import type { Logger } from 'pino';
+import { RigSupervisor } from '../engine/rig-supervisor';
+import { sha256Hex } from '../evaluation/sha256';
+import type { RigStation, StationRig } from '../interfaces/rig-stations';
+import type { SampleStore } from '../interfaces/sample-store';
+import type { LinkEvent } from '../interfaces/turntable-link';
+import { createRunStore } from '../store/run-store';
+import { ApparatusMemory } from './apparatus-memory';
+import { MemoryArmKeeper } from './arm-keeper';
+import type { Background } from './background';
+import type { BuildParts } from './build-parts';
+import { LeaseKeeper } from './lease-keeper';
+import { ServerRigStations } from './rig-stations';
+import { SimulatedApparatus } from './simulated-apparatus';
+
+const engineItself = { id: null, name: 'the run engine' };
+const shortestLeaseMs = 5_000;
+
+export interface RigSide {
+  arms: MemoryArmKeeper;
+  leases: LeaseKeeper;
+  stations: ServerRigStations;
+  supervisor: RigSupervisor;
+}
+
+/** All that has to do with the rigs: who may move them, their lines, and the engine that drives runs. */
+export function buildRigSide(
+  parts: BuildParts,
+  { log, background, samples }: { log: Logger; background: Background; samples: SampleStore },
+): RigSide {
+  const { database, clock, overrides = {} } = parts;
+  const arms = new MemoryArmKeeper({ database, clock, log, sha256: sha256Hex, background: (work, what) => background.add(work, what) });
+  const leases = new LeaseKeeper({
+    database,
+    clock,
+    log,
+    holder: randomUUID(),
+    leaseMs: Math.max(shortestLeaseMs, overrides.paceMs ?? 0),
+    onLost: letGo,
+  });
+  const stations = new ServerRigStations({
+    database,
+    samples,
+    clock,
+    log,
+    paceMs: overrides.paceMs ?? 0,
+    epochOf: (rig) => leases.epochOf(rig),
+    apparatusOf: apparatusMaker(parts),
+    onLinkEvent: heedLink,
+  });
+  const supervisor = new RigSupervisor({
+    store: createRunStore(database.db),
+    clock,
+    sha256: sha256Hex,
+    linkOf: (rigId) => stations.get(rigId)?.link ?? null,
+    armOf: (rigId) => arms.armOf(rigId),
+    perform: (effect, start) => {
+      if (effect.kind === 'void-arm') arms.end({ labId: start.labId, rigId: start.rigId }, effect.reason, engineItself);
+      else log.info({ runId: start.runId, topic: effect.topic }, effect.text);
+    },
+  });
+
+  /** Two drivers on one rig would be worse than none. */
+  function letGo(): void {
+    log.fatal('another server has taken a rig over; this one lets go of all of them');
+    supervisor.close();
+    background.add(stations.close(), 'closing the lines');
+  }
+
+  /** Whatever lets people or surprises into the room ends the arm, run or no run. */
+  function heedLink(station: RigStation, event: LinkEvent): void {
+    const why = endOfArm(event);
+    if (why !== null) arms.end(station, why, engineItself);
+  }
+
+  return { arms, leases, stations, supervisor };
+}
+
+function endOfArm(event: LinkEvent): string | null {
+  if (event.kind === 'interlock' && !event.closed) return 'the interlock was opened';
+  if (event.kind === 'supply' && !event.present) return 'the motor supply was lost';
+  if (event.kind === 'reset') return 'the controller restarted';
+  if (event.kind === 'ready' && !event.controller.interlockClosed) return 'the interlock is open';
+  if (event.kind === 'ready' && !event.controller.supplyPresent) return 'the motor supply is off';
+  return null;
+}
+
+/** The simulated turntable of a rig: one for the life of this server, or one that is handed in and lives longer. */
+function apparatusMaker({ clock, config, overrides = {} }: BuildParts): (rig: StationRig) => SimulatedApparatus {
+  const memory = config.mode === 'test' ? null : new ApparatusMemory(join(config.stateDir, 'simulated'));
+  const made = new Map<string, { key: string; apparatus: SimulatedApparatus }>();
+  return (rig) => {
+    const { motion } = rig.document;
+    if (motion === undefined) throw new Error('a simulated rig needs motion data');
+    const key = JSON.stringify(rig.document);
+    const known = made.get(rig.id);
+    if (known?.key === key) return known.apparatus;
+    const controller = overrides.controllerOf?.(rig);
+    const apparatus = new SimulatedApparatus({
+      clock,
+      rigId: rig.id,
+      document: { ...rig.document, motion },
+      seed: randomBytes(3).readUIntBE(0, 3),
+      memory,
+      ...(controller === undefined ? {} : { controller }),
+    });
+    made.set(rig.id, { key, apparatus });
+    return apparatus;
+  };
+}
