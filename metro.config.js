@@ -1,15 +1,12 @@
 const http = require('node:http');
 const { getDefaultConfig } = require('expo/metro-config');
 const { withNativeWind } = require('nativewind/metro');
+const { cutting } = require('./scripts/lib/web-cuts.cjs');
 
 const config = getDefaultConfig(__dirname);
 
-// zod's translations are reached through one index file and would ride along in full; English is imported directly.
-const resolveRequest = config.resolver.resolveRequest;
-config.resolver.resolveRequest = (context, moduleName, platform) => {
-  if (moduleName.endsWith('/locales/index.js') && /[\\/]zod[\\/]v4[\\/]/.test(context.originModulePath)) return { type: 'empty' };
-  return (resolveRequest ?? context.resolveRequest)(context, moduleName, platform);
-};
+const { resolveRequest } = config.resolver;
+config.resolver.resolveRequest = cutting(__dirname, (context, moduleName, platform) => (resolveRequest ?? context.resolveRequest)(context, moduleName, platform));
 
 // In development the page comes from here and the API from the server: one origin, so cookies and live streams work as in production.
 config.server.enhanceMiddleware = (middleware) => (request, response, next) => {

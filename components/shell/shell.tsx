@@ -1,9 +1,9 @@
 import { Redirect, usePathname, type Href } from 'expo-router';
-import type { ReactNode } from 'react';
+import { Suspense, useEffect, type ReactNode } from 'react';
 import { View } from 'react-native';
 import { useConnection, useSession } from '@/components/api';
-import { RunningBar } from '@/components/runs/running-bar';
 import { Empty, Loading, Offline } from '@/components/ui';
+import { fetchScreens, RunningBar } from './lazy-screens';
 import { NavigationBar } from './navigation-bar';
 
 /** Around every screen of a signed-in person: bottom tabs on a phone, a side rail from 1024 px, the state of the connection. */
@@ -11,6 +11,8 @@ export function Shell({ children }: { children: ReactNode }) {
   const { state, membership } = useSession();
   const { online } = useConnection();
   const pathname = usePathname();
+  // While the server is asked who this is.
+  useEffect(() => void fetchScreens().catch(() => undefined), []);
   if (state.kind === 'signed-out') return <Redirect href={`/sign-in?then=${encodeURIComponent(pathname)}` as Href} />;
   return (
     <View className="h-full flex-1 flex-col-reverse bg-ink wide:flex-row">
@@ -24,10 +26,10 @@ export function Shell({ children }: { children: ReactNode }) {
             Your account belongs to no lab. Ask an owner to invite you: the mail holds a link.
           </Empty>
         ) : (
-          <>
+          <Suspense fallback={<Loading />}>
             <RunningBar />
             {children}
-          </>
+          </Suspense>
         )}
       </View>
     </View>

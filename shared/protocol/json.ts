@@ -1,9 +1,4 @@
-import * as z from 'zod';
-import { documentFields, protocolDocumentSchema, type ProtocolDocument, type Step, stepFields, type StepKind } from './document';
-import { fieldNotes, kindNotes } from './schema-notes';
-
-/** Address of the published schema, below the server's root. */
-const schemaPath = '/schemas/protocol-1.json';
+import { documentFields, type ProtocolDocument, type Step, stepFields } from './document';
 
 /**
  * The text of a protocol file: two spaces of indentation, fields in the order of the format, a newline at the end. The same document
@@ -20,52 +15,4 @@ function ordered(value: Record<string, unknown>, fields: readonly string[]): Rec
 function orderedStep(step: Step): Record<string, unknown> {
   const fields = stepFields[step.kind].filter((field) => field !== 'steps');
   return step.kind === 'repeat' ? { ...ordered(step, fields), steps: step.steps.map(orderedStep) } : ordered(step, fields);
-}
-
-type JsonObject = Record<string, unknown>;
-
-/** Of these fields exactly one is given: said in zod by a refinement, which no generator can carry over. */
-const oneOf = (fields: readonly string[]) => ({ oneOf: fields.map((field) => ({ required: [field] })) });
-
-const extra: Record<string, JsonObject> = {
-  dwell: oneOf(['for_s', 'periods', 'beat_periods']),
-  settle: oneOf(['for_s', 'calmWhen']),
-  repeat: oneOf(['times', 'until']),
-};
-
-function annotate(jsonSchema: object, kind: StepKind, properties: Record<string, JsonObject>): void {
-  Object.assign(jsonSchema, { description: kindNotes[kind] }, extra[kind]);
-  for (const [name, property] of Object.entries(properties)) {
-    const note = fieldNotes[`${kind}.${name}`];
-    if (note !== undefined) property['description'] = note;
-  }
-}
-
-/**
- * The JSON Schema (2020-12) of the protocol document, generated from the zod schema. It says what is written how; what a protocol needs
- * beyond that (stations, free paths, lengths) depends on the rig.
- */
-export function protocolJsonSchema(): JsonObject {
-  const generated = z.toJSONSchema(protocolDocumentSchema, {
-    target: 'draft-2020-12',
-    io: 'input',
-    override: ({ jsonSchema }) => {
-      const properties = jsonSchema.properties as Record<string, JsonObject> | undefined;
-      const kind = properties?.['kind']?.['const'];
-      if (typeof kind === 'string') annotate(jsonSchema, kind as StepKind, properties ?? {});
-      if (properties?.['slopeBelow_per_h'] !== undefined && properties['for_s'] !== undefined)
-        Object.assign(jsonSchema, oneOf(['below', 'slopeBelow_per_h']));
-      if (properties?.['window_s'] !== undefined)
-        Object.assign(jsonSchema, { anyOf: [{ required: ['amplitude_urad'] }, { required: ['drift_urad_per_h'] }] });
-      if (properties?.['turns'] !== undefined) Object.assign(properties['turns'] ?? {}, { not: { const: 0 } });
-    },
-  }) as JsonObject;
-  const { $schema, $defs, ...body } = generated;
-  const named = { $schema, $id: schemaPath, title: 'Evenfall protocol, format 1', ...body, $defs };
-  return JSON.parse(JSON.stringify(named).replaceAll('__schema0', 'step')) as JsonObject;
-}
-
-/** The text of the checked-in copy of the schema. */
-export function protocolJsonSchemaText(): string {
-  return `${JSON.stringify(protocolJsonSchema(), null, 2)}\n`;
 }

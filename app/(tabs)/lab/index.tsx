@@ -1,4 +1,4 @@
-import { LabScreen } from '@/components/lab/lab-screen';
+import { LabScreen } from '@/components/shell/lazy-screens';
 
 export default function Lab() {
   return <LabScreen />;

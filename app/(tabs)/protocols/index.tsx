@@ -1,4 +1,4 @@
-import { ProtocolsScreen } from '@/components/protocols/protocols-screen';
+import { ProtocolsScreen } from '@/components/shell/lazy-screens';
 
 export default function Protocols() {
   return <ProtocolsScreen />;

@@ -1,4 +1,4 @@
-import { NewProtocolScreen } from '@/components/protocols/new-protocol-screen';
+import { NewProtocolScreen } from '@/components/shell/lazy-screens';
 
 export default function NewProtocol() {
   return <NewProtocolScreen />;

@@ -1,4 +1,4 @@
-import { RigsScreen } from '@/components/rigs/rigs-screen';
+import { RigsScreen } from '@/components/shell/lazy-screens';
 
 export default function Rigs() {
   return <RigsScreen />;

@@ -1,4 +1,4 @@
-import { RunsScreen } from '@/components/runs/runs-screen';
+import { RunsScreen } from '@/components/shell/lazy-screens';
 
 export default function Runs() {
   return <RunsScreen />;

@@ -1,4 +1,4 @@
-import { EditorScreen } from '@/components/protocols/editor-screen';
+import { EditorScreen } from '@/components/shell/lazy-screens';
 
 export default function ProtocolEditor() {
   return <EditorScreen />;

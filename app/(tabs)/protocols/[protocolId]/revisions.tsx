@@ -1,4 +1,4 @@
-import { ProtocolRevisionsScreen } from '@/components/protocols/revisions-screen';
+import { ProtocolRevisionsScreen } from '@/components/shell/lazy-screens';
 
 export default function ProtocolRevisions() {
   return <ProtocolRevisionsScreen />;

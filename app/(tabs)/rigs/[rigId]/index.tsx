@@ -1,4 +1,4 @@
-import { RigScreen } from '@/components/rigs/rig-screen';
+import { RigScreen } from '@/components/shell/lazy-screens';
 
 export default function Rig() {
   return <RigScreen />;

@@ -1,4 +1,4 @@
-import { LinkScreen } from '@/components/rigs/link-screen';
+import { LinkScreen } from '@/components/shell/lazy-screens';
 
 export default function RigLink() {
   return <LinkScreen />;

@@ -1,4 +1,4 @@
-import { RigRevisionsScreen } from '@/components/rigs/rig-revisions-screen';
+import { RigRevisionsScreen } from '@/components/shell/lazy-screens';
 
 export default function RigRevisions() {
   return <RigRevisionsScreen />;

@@ -1,4 +1,4 @@
-import { StartScreen } from '@/components/rigs/start-screen';
+import { StartScreen } from '@/components/shell/lazy-screens';
 
 export default function StartRun() {
   return <StartScreen />;

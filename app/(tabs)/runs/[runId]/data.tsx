@@ -1,4 +1,4 @@
-import { DataScreen } from '@/components/data/data-screen';
+import { DataScreen } from '@/components/shell/lazy-screens';
 
 export default function Data() {
   return <DataScreen />;

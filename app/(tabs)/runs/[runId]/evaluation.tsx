@@ -1,4 +1,4 @@
-import { EvaluationScreen } from '@/components/evaluation/evaluation-screen';
+import { EvaluationScreen } from '@/components/shell/lazy-screens';
 
 export default function Evaluation() {
   return <EvaluationScreen />;

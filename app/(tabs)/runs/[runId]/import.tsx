@@ -1,4 +1,4 @@
-import { ImportScreen } from '@/components/data/import-screen';
+import { ImportScreen } from '@/components/shell/lazy-screens';
 
 export default function Import() {
   return <ImportScreen />;

@@ -1,4 +1,4 @@
-import { RunScreen } from '@/components/runs/run-screen';
+import { RunScreen } from '@/components/shell/lazy-screens';
 
 export default function Run() {
   return <RunScreen />;

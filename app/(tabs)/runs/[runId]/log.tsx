@@ -1,4 +1,4 @@
-import { StepLogScreen } from '@/components/runs/step-log-screen';
+import { StepLogScreen } from '@/components/shell/lazy-screens';
 
 export default function StepLog() {
   return <StepLogScreen />;

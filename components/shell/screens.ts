@@ -1,0 +1,17 @@
+export { DataScreen } from '@/components/data/data-screen';
+export { ImportScreen } from '@/components/data/import-screen';
+export { EvaluationScreen } from '@/components/evaluation/evaluation-screen';
+export { LabScreen } from '@/components/lab/lab-screen';
+export { EditorScreen } from '@/components/protocols/editor-screen';
+export { NewProtocolScreen } from '@/components/protocols/new-protocol-screen';
+export { ProtocolsScreen } from '@/components/protocols/protocols-screen';
+export { ProtocolRevisionsScreen } from '@/components/protocols/revisions-screen';
+export { LinkScreen } from '@/components/rigs/link-screen';
+export { RigRevisionsScreen } from '@/components/rigs/rig-revisions-screen';
+export { RigScreen } from '@/components/rigs/rig-screen';
+export { RigsScreen } from '@/components/rigs/rigs-screen';
+export { StartScreen } from '@/components/rigs/start-screen';
+export { RunScreen } from '@/components/runs/run-screen';
+export { RunningBar } from '@/components/runs/running-bar';
+export { RunsScreen } from '@/components/runs/runs-screen';
+export { StepLogScreen } from '@/components/runs/step-log-screen';
