@@ -201,6 +201,7 @@ describe('a run', () => {
     const runId = await lab.run(quickProtocol());
     await lab.advance(3_600_000, () => lab.services.supervisor.driverOf(runId)?.facts().current?.kind === 'dwell');
     await lab.intervene(runId, 'hold-after-dwell').expect(202);
+    await lab.services.idle();
     expect(await lab.view(runId)).toMatchObject({ state: 'running', holdAfterDwell: true });
     await lab.until(runId, 'held');
     expect((await stepsOf(runId)).at(-1)).toMatchObject({ kind: 'dwell', outcome: 'done' });
