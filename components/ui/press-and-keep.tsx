@@ -66,6 +66,8 @@ function SwitchAndButton({ label, icon, statement, onConfirm, disabled = false, 
 }
 
 type Stage = 'idle' | 'pressed' | 'ripe';
+/** How a press ended that sent nothing. */
+type Failed = 'early' | 'beside';
 
 /**
  * The press counts when the finger is lifted on the button after 1.5 s: sliding off takes it back (WCAG 2.2, 2.5.2), and nothing that
@@ -73,7 +75,7 @@ type Stage = 'idle' | 'pressed' | 'ripe';
  */
 function useKeptPress({ off, onConfirm }: { off: boolean; onConfirm: () => void }) {
   const [stage, setStage] = useState<Stage>('idle');
-  const [early, setEarly] = useState(false);
+  const [failed, setFailed] = useState<Failed | null>(null);
   const timer = useRef<ReturnType<typeof setTimeout>>(undefined);
   useEffect(() => () => clearTimeout(timer.current), []);
   const end = () => {
@@ -82,19 +84,20 @@ function useKeptPress({ off, onConfirm }: { off: boolean; onConfirm: () => void 
   };
   return {
     stage: off ? ('idle' as const) : stage,
-    early,
+    failed,
     handlers: {
       onPointerDown: (event: PointerEvent<HTMLDivElement>) => {
         if (off || event.button > 0) return;
         event.currentTarget.setPointerCapture?.(event.pointerId);
-        setEarly(false);
+        setFailed(null);
         setStage('pressed');
         timer.current = setTimeout(() => setStage('ripe'), keepMs);
       },
       onPointerUp: (event: PointerEvent<HTMLDivElement>) => {
         if (off || stage === 'idle') return;
-        setEarly(stage === 'pressed');
-        if (stage === 'ripe' && isOn(event)) onConfirm();
+        const on = isOn(event);
+        if (stage === 'ripe' && on) onConfirm();
+        setFailed(!on ? 'beside' : stage === 'pressed' ? 'early' : null);
         end();
       },
       onPointerCancel: end,
@@ -109,6 +112,10 @@ function isOn({ currentTarget, clientX, clientY }: PointerEvent<HTMLDivElement>)
   return clientX >= left && clientX <= right && clientY >= top && clientY <= bottom;
 }
 
+const failedWords: Record<Failed, string> = {
+  early: 'Let go too early: nothing was sent. Keep it pressed for 1.5 s.',
+  beside: 'Let go beside the button: nothing was sent. Press it again.',
+};
 const keepWords: Record<Stage, string | null> = { idle: null, pressed: 'Keep pressed', ripe: 'Now let go' };
 
 function KeepButton({
@@ -121,7 +128,7 @@ function KeepButton({
   testID,
 }: PressAndKeepProps & { onKeyboard: () => void }) {
   const off = disabled || busy;
-  const { stage, early, handlers } = useKeptPress({ off, onConfirm });
+  const { stage, failed, handlers } = useKeptPress({ off, onConfirm });
   const onKeyDown = (event: { key: string; preventDefault: () => void }) => {
     if (off || (event.key !== 'Enter' && event.key !== ' ')) return;
     event.preventDefault();
@@ -151,7 +158,7 @@ function KeepButton({
         </View>
       </div>
       <Label role="status" aria-live="polite" className="text-center">
-        {early ? 'Let go too early: nothing was sent. Keep it pressed for 1.5 s.' : 'Press and keep for 1.5 s, then let go.'}
+        {failed === null ? 'Press and keep for 1.5 s, then let go.' : failedWords[failed]}
       </Label>
     </View>
   );

@@ -36,10 +36,11 @@ test('a press let go early confirms nothing and says so', () => {
   expect(screen.getByRole('status').textContent).toContain('Let go too early');
 });
 
-test('sliding off the button takes the press back', () => {
+test('sliding off the button takes the press back, and is told', () => {
   press();
   wait(2000);
   letGo({ clientX: 400, clientY: 400 });
+  expect(screen.getByRole('status').textContent).toContain('Let go beside the button: nothing was sent.');
   expect(confirmed).not.toHaveBeenCalled();
   press();
   wait(2000);
