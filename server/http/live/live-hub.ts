@@ -4,7 +4,7 @@ import type { LiveMessages, RunView } from '@/shared/contracts/runs';
 import type { Cancel, Clock } from '@/server/interfaces/clock';
 import { ProblemError } from '../problem-error';
 import type { SignedIn } from '../route-context';
-import { EventStream } from './event-stream';
+import { encodeEvent, EventStream } from './event-stream';
 
 export interface LiveRunKey {
   labId: string;
@@ -39,7 +39,6 @@ interface Reader {
   waiting: LiveChange[] | null;
   /** Last event sent. */
   sentSeq: number;
-  samples: LiveSamples[];
 }
 
 const beatMs = 1000;
@@ -52,6 +51,8 @@ const longestGap = 1000;
 /** All open live streams of this process: filled from the database, then fed by what the engine saves. */
 export class LiveHub {
   private readonly readers = new Set<Reader>();
+  /** Since the last beat, by rig. */
+  private readonly samples = new Map<string, LiveSamples[]>();
   private beats = 0;
   private cancelBeat: Cancel | null = null;
 
@@ -69,7 +70,7 @@ export class LiveHub {
         'too-many-requests',
         `You have ${String(open)} live streams open, which is the most there may be. Close one of the other pages.`,
       );
-    const reader: Reader = { run, me, stream: new EventStream(res), waiting: [], sentSeq: lastEventId ?? 0, samples: [] };
+    const reader: Reader = { run, me, stream: new EventStream(res), waiting: [], sentSeq: lastEventId ?? 0 };
     this.readers.add(reader);
     reader.stream.onClosed(() => this.drop(reader));
     reader.stream.retry(retryMs);
@@ -85,16 +86,18 @@ export class LiveHub {
 
   /** Sends what was just saved to everybody who follows the run. */
   changed(runId: string, change: LiveChange): void {
+    const whole = once(() => Buffer.from(encodeChange(change)));
     for (const reader of this.readers) {
       if (reader.run.runId !== runId) continue;
-      if (reader.waiting === null) sendChange(reader, change);
+      if (reader.waiting === null) sendChange(reader, change, whole);
       else reader.waiting.push(change);
     }
   }
 
   /** Keeps new samples of a rig for the next beat. */
   sampled(rigId: string, samples: LiveSamples): void {
-    for (const reader of this.readers) if (reader.run.rigId === rigId) reader.samples.push(samples);
+    if (![...this.readers].some(({ run }) => run.rigId === rigId)) return;
+    this.samples.set(rigId, [...(this.samples.get(rigId) ?? []), samples]);
   }
 
   /** Ends the streams of a session or of an account. */
@@ -119,7 +122,7 @@ export class LiveHub {
       return;
     }
     if (lastEventId !== null && lastEventId <= view.lastSeq) await this.fillGap(reader, lastEventId);
-    reader.stream.send('snapshot', view, view.lastSeq);
+    reader.stream.send(encodeEvent('snapshot', view, view.lastSeq));
     reader.sentSeq = Math.max(lastEventId !== null && lastEventId > view.lastSeq ? 0 : reader.sentSeq, view.lastSeq);
     const waiting = reader.waiting ?? [];
     reader.waiting = null;
@@ -131,11 +134,11 @@ export class LiveHub {
     const { source } = this.parts;
     const events = await source.events(reader.run, { afterSeq, limit: longestGap + 1 });
     if (events.length > longestGap) return;
-    for (const event of events) reader.stream.send('event', event, event.seq);
+    for (const event of events) reader.stream.send(encodeEvent('event', event, event.seq));
     reader.sentSeq = events.at(-1)?.seq ?? afterSeq;
     const touched = new Set(events.map((event) => event.data.seq));
     if (events.length === 0) return;
-    for (const step of await source.steps(reader.run)) if (touched.has(step.seq)) reader.stream.send('step', step, null);
+    for (const step of await source.steps(reader.run)) if (touched.has(step.seq)) reader.stream.send(encodeEvent('step', step, null));
   }
 
   private keepBeating(): void {
@@ -148,15 +151,24 @@ export class LiveHub {
   }
 
   private beat(): void {
-    const { source, clock } = this.parts;
     this.beats += 1;
+    const texts = new Map<string, Buffer>();
     for (const reader of this.readers) {
-      for (const samples of joined(reader.samples)) reader.stream.send('samples', samples, null);
-      reader.samples = [];
-      reader.stream.send('beat', { serverAt: new Date(clock.utcMs()).toISOString(), ...source.beat(reader.run) }, null);
+      const text = texts.get(reader.run.runId) ?? this.beatOf(reader.run);
+      texts.set(reader.run.runId, text);
+      reader.stream.send(text);
       if (this.beats % commentEveryBeats === 0) reader.stream.comment('still here');
       if (this.beats % checkEveryBeats === 0) void this.check(reader);
     }
+    this.samples.clear();
+  }
+
+  /** What all who follow the run are told. */
+  private beatOf(run: LiveRunKey): Buffer {
+    const { source, clock } = this.parts;
+    const samples = joined(this.samples.get(run.rigId) ?? []).map((batch) => encodeEvent('samples', batch, null));
+    const beat = encodeEvent('beat', { serverAt: new Date(clock.utcMs()).toISOString(), ...source.beat(run) }, null);
+    return Buffer.from(samples.join('') + beat);
   }
 
   private async check(reader: Reader): Promise<void> {
@@ -177,14 +189,27 @@ export class LiveHub {
   }
 }
 
-function sendChange(reader: Reader, change: LiveChange): void {
-  for (const event of change.events) {
-    if (event.seq <= reader.sentSeq) continue;
-    reader.stream.send('event', event, event.seq);
-    reader.sentSeq = event.seq;
-  }
-  for (const step of change.steps) reader.stream.send('step', step, null);
-  if (change.view.lastSeq >= reader.sentSeq) reader.stream.send('snapshot', change.view, change.view.lastSeq);
+function sendChange(reader: Reader, change: LiveChange, whole = () => Buffer.from(encodeChange(change))): void {
+  const { events, steps, view } = change;
+  const fresh = events.filter(({ seq }) => seq > reader.sentSeq);
+  reader.sentSeq = Math.max(reader.sentSeq, ...fresh.map(({ seq }) => seq));
+  const snapshotIsNews = view.lastSeq >= reader.sentSeq;
+  if (fresh.length === events.length && snapshotIsNews) reader.stream.send(whole());
+  else reader.stream.send(encodeChange({ events: fresh, steps, view: snapshotIsNews ? view : null }));
+}
+
+function encodeChange({ events, steps, view }: Omit<LiveChange, 'view'> & { view: RunView | null }): string {
+  return [
+    ...events.map((event) => encodeEvent('event', event, event.seq)),
+    ...steps.map((step) => encodeEvent('step', step, null)),
+    view === null ? '' : encodeEvent('snapshot', view, view.lastSeq),
+  ].join('');
+}
+
+/** The first call makes the value, later ones give it again. */
+function once<T>(make: () => T): () => T {
+  let made: { value: T } | null = null;
+  return () => (made ??= { value: make() }).value;
 }
 
 /** Batches of one channel as one message. */

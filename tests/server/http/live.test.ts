@@ -59,7 +59,7 @@ test('tells each event once with its number, the rows, the samples and a beat ea
   const runId = await lab.run(quickProtocol());
   const reader = await follow(runId);
   await reader.until(({ events }) => events.length > 0);
-  const from = viewOf(reader).lastSeq;
+  const from = (reader.of('snapshot')[0]?.data as RunView).lastSeq;
   await lab.until(runId, 'finished');
   await reader.until(() => viewOf(reader).state === 'finished');
   expect(seqsOf(reader)).toEqual(range(from + 1, viewOf(reader).lastSeq));
