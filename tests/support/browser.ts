@@ -46,7 +46,7 @@ export async function openBrowser(baseURL: string, size: Size): Promise<Browser>
   });
   await context.addInitScript({ content: 'globalThis.__name = (f) => f;' });
   const page = context.pages()[0] ?? (await context.newPage());
-  page.setDefaultTimeout(20_000);
+  page.setDefaultTimeout(15_000);
   const errors: string[] = [];
   page.on('pageerror', (error) => errors.push(String(error)));
   page.on('console', (message) => {

@@ -11,8 +11,10 @@ export const plain = (text: string) => text.replace(/[\u00a0\u2009\u202f]/g, ' '
 export const numberOf = (text: string | undefined): number => Number((text ?? '').replace(/\s/g, '').replace('−', '-'));
 
 /** The same words with any kind of space between them. */
-const loose = (words: string | RegExp) =>
-  new RegExp((typeof words === 'string' ? words.replace(/[.*+?^${}()|[\]\\]/g, '\\$&') : words.source).replaceAll(' ', '\\s'));
+const loose = (words: string | RegExp) => {
+  const source = typeof words === 'string' ? words.replace(/[.*+?^${}()|[\]\\]/g, '\\$&') : words.source;
+  return new RegExp(source.replaceAll(' ', '\\s'), typeof words === 'string' ? '' : words.flags);
+};
 
 /** A person at a page: taps on a phone, clicks at a desk, reads what is there. */
 export class Hand {
@@ -124,7 +126,7 @@ export class Hand {
 }
 
 /** Waits until a condition holds, looking again often. */
-export async function until(holds: () => Promise<boolean> | boolean, what: string | (() => string), withinMs = 20_000): Promise<void> {
+export async function until(holds: () => Promise<boolean> | boolean, what: string | (() => string), withinMs = 15_000): Promise<void> {
   const endMs = performance.now() + withinMs;
   for (;;) {
     if (await holds()) return;

@@ -3,6 +3,8 @@ import { connect, createServer, type AddressInfo, type Server, type Socket } fro
 /** `open`: all goes through. `deaf`: what is sent arrives, no answer comes back. `cut`: nothing gets through. */
 type Condition = 'open' | 'deaf' | 'cut';
 
+const deafMs = 150;
+
 /** The network between a page and the server: it can be cut and mended, and it can swallow answers. */
 export class Network {
   private condition: Condition = 'open';
@@ -40,9 +42,14 @@ export class Network {
       far.destroy();
     };
     this.lines.add(line);
-    for (const socket of [near, far]) socket.on('error', end).on('close', end);
+    near.on('error', end).on('close', () => (this.condition === 'deaf' ? this.lines.delete(line) : end()));
+    far.on('error', end).on('close', end);
     if (this.condition === 'cut') return end();
-    near.on('data', (bytes) => far.write(bytes));
+    near.on('data', (bytes) => {
+      far.write(bytes);
+      // As on a bad network: the line goes down with the answer still under way.
+      if (this.condition === 'deaf') setTimeout(() => near.destroy(), deafMs);
+    });
     far.on('data', (bytes) => (this.condition === 'open' ? near.write(bytes) : undefined));
   }
 
