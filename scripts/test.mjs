@@ -26,7 +26,7 @@ if (code === 0) {
   const cluster = await startCluster('test');
   const env = { ...process.env, EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres'), TZ: 'UTC' };
   const jest = join(root, 'node_modules', 'jest', 'bin', 'jest.js');
-  code = await pass(process.execPath, [jest, '--json', `--outputFile=${report}`, ...args], { cwd: root, env });
+  code = await pass(process.execPath, [jest, '--testTimeout=30000', '--json', `--outputFile=${report}`, ...args], { cwd: root, env });
   if (!cluster.wasRunning) await cluster.stop();
   const { numPassedTests, numFailedTests, numPendingTests } = JSON.parse(readFileSync(report, 'utf8'));
   say(`${((Date.now() - start) / 1000).toFixed(0)} s in all`);

@@ -9,6 +9,7 @@ import { startDemoMailbox, type DemoMailbox } from '../notify/demo-mailbox';
 import { createSmtpMail } from '../notify/smtp-mail';
 import { buildServer } from './build-server';
 import { ConfigError, readConfig } from './config';
+import { queueDemoRehearsal } from './demo-rehearsal';
 import { RealClock } from './real-clock';
 
 /** The server as a process: configuration, database, demo lab, one line on stdout once it listens, and a clean end. */
@@ -30,7 +31,9 @@ async function main(): Promise<void> {
   const clock = new RealClock();
   const database = connect({ url: config.databaseUrl, maxConnections: 20 });
   await migrateToLatest(database);
-  if (config.demo) await seedDemo(database, { nowUtcMs: clock.utcMs(), hashPassword, sha256: sha256Hex });
+  if (config.demo && (await seedDemo(database, { nowUtcMs: clock.utcMs(), hashPassword, sha256: sha256Hex }))) {
+    await queueDemoRehearsal(database, clock.utcMs());
+  }
   const mailbox = config.demo && config.smtpUrl === null ? await startDemoMailbox({ folder: join(config.stateDir, 'mail'), clock }) : null;
   const smtpUrl = config.smtpUrl ?? mailbox?.url ?? null;
   const mail = smtpUrl === null ? null : createSmtpMail({ url: smtpUrl, from: config.mailFrom });

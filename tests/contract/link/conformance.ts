@@ -57,7 +57,9 @@ export function linkConformance(maker: BenchMaker): void {
       // v²/a = 15° is more than the way: a triangle of 2 √(s/a), s = 12.35° less where it stood (physics reference, K2).
       const wayDeg = Math.abs(12.35 - (began.angleDeg as number));
       const profileS = wayDeg > 15 ? wayDeg / 30 + 0.5 : 2 * Math.sqrt(wayDeg / 60);
-      expect((ended.at.utcMs - began.at.utcMs) / 1000).toBeCloseTo(profileS, 3);
+      // Both stamps carry their own u; on a starved machine the clock model says so itself.
+      const toleranceS = 0.0005 + 3 * Math.hypot(began.at.uS, ended.at.uS);
+      expect(Math.abs((ended.at.utcMs - began.at.utcMs) / 1000 - profileS)).toBeLessThan(toleranceS);
       expect(watch.order('accepted', 'motion-began', 'motion-ended')).toEqual(['accepted', 'motion-began', 'motion-ended']);
     });
 

@@ -144,7 +144,7 @@ test('thousands of rows in one commit are stored', async () => {
   await store.commit(write(start, { events, steps: Array.from({ length: 4100 }, (_, index) => step(index + 1)) }));
   expect((await store.load(start.labId, start.runId))?.chain.seq).toBe(4500);
   expect(await db().$count(runSteps, eq(runSteps.runId, start.runId))).toBe(4100);
-});
+}, 60_000);
 
 test('a rig has one run at a time, and rehearsals beside it', async () => {
   const store = createRunStore(db());
