@@ -4,14 +4,14 @@ import * as z from 'zod';
 
 const withU = z.strictObject({ value: z.number(), u: z.number() });
 
-export const dwellResultSchema = z.strictObject({
+const dwellResultSchema = z.strictObject({
   seq: z.number().int(), station: z.string(),
   /** Fitted centre at mid-dwell, drift not removed. */
   theta_rad: withU.nullable(),
   samples: z.number().int(), used: z.boolean(), why: z.string().nullable(),
 });
 
-export const budgetLineSchema = z.strictObject({
+const budgetLineSchema = z.strictObject({
   input: z.string(), value: z.number(), u: z.number(),
   /** dG/dinput in the input's unit. */
   sensitivity: z.number(), contribution: z.number(), share: z.number(),

@@ -2,7 +2,7 @@ import { execFileSync } from 'node:child_process';
 import { existsSync, readFileSync } from 'node:fs';
 import { join } from 'node:path';
 
-export const root = join(__dirname, '..', '..');
+const root = join(__dirname, '..', '..');
 
 /** Every file of the tree that git knows or would take in, as paths from the root. */
 export function trackedFiles(): string[] {

@@ -17,7 +17,7 @@ afterAll(() => rmSync(state, { recursive: true }));
 function start(environment: Record<string, string>): { child: ChildProcess; said: Promise<string>; complaints: () => string } {
   const child = spawn(process.execPath, ['--import', 'tsx', 'server/boot/main.ts'], {
     cwd: root,
-    env: { PATH: process.env.PATH ?? '', ...environment } as NodeJS.ProcessEnv,
+    env: { PATH: process.env.PATH ?? '', ...environment } as unknown as NodeJS.ProcessEnv,
     stdio: ['ignore', 'pipe', 'pipe'],
   });
   let complaints = '';
@@ -54,7 +54,7 @@ test.each(['SIGTERM', 'SIGINT'] as const)('migrates, seeds, says where it listen
   expect(greeting.signIns.map(({ role }) => role)).toEqual(['owner', 'keeper', 'operator', 'analyst', 'viewer']);
   expect(greeting.mailbox).toBe(join(state, 'mail'));
 
-  const [{ email, password }] = greeting.signIns as [{ email: string; password: string }];
+  const { email, password } = greeting.signIns[0] ?? { email: '', password: '' };
   const signedIn = await fetch(`${greeting.listening}/api/session`, {
     method: 'POST',
     headers: { 'content-type': 'application/json', origin: greeting.listening },
