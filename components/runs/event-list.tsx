@@ -2,18 +2,8 @@ import { View } from 'react-native';
 import { Body, Label, Num } from '@/components/ui';
 import type { ChainedEvent } from '@/shared/archive/run-records';
 import { formatClock } from '@/shared/lib/format-time';
+import { eventFacts } from './event-facts';
 import { eventWords } from './run-words';
-
-/** What the row above says already. */
-const saidAbove: ReadonlySet<string> = new Set(['seq', 'path', 'kind', 'label', 'station']);
-
-/** Facts of an event as names and values; nested values are shown as they are. */
-function factsOf(data: Record<string, unknown>): string {
-  return Object.entries(data)
-    .filter(([name, value]) => !saidAbove.has(name) && value !== '' && value !== null)
-    .map(([name, value]) => `${name} ${typeof value === 'object' ? JSON.stringify(value) : String(value)}`)
-    .join(' · ');
-}
 
 /** Events of the chain in order, each with its number and the beginning of its hash. */
 export function EventList({ events, timeZone }: { events: readonly ChainedEvent[]; timeZone: string }) {
@@ -27,7 +17,7 @@ export function EventList({ events, timeZone }: { events: readonly ChainedEvent[
           </Num>
           <Num size={13}>{formatClock(Date.parse(event.at), { timeZone, precision: 'ms' })}</Num>
           <Body size={15}>{eventWords(event.kind)}</Body>
-          <Label className="min-w-0 shrink">{factsOf(event.data)}</Label>
+          <Label className="min-w-0 shrink">{eventFacts(event.data)}</Label>
           <Num size={13} tone="dim" aria-label={`hash begins with ${event.hash.slice(0, 8)}`}>
             {event.hash.slice(0, 8)}
           </Num>

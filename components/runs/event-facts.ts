@@ -1,0 +1,24 @@
+import { formatDegrees } from '@/shared/lib/format-angle';
+import { formatDuration } from '@/shared/lib/format-duration';
+
+/** What the row of the step says already. */
+const saidAbove: ReadonlySet<string> = new Set(['seq', 'path', 'kind', 'label', 'station', 'commandId']);
+
+const names: Record<string, string> = { bootId: 'boot id', gapS: 'gap', angleDeg: 'angle', offDeg: 'off by', sha256: 'SHA-256' };
+
+function valueWords(name: string, value: unknown): string {
+  if (typeof value === 'number') {
+    if (name.endsWith('S')) return value < 60 ? `${value.toFixed(1)} s` : formatDuration(value);
+    if (name.endsWith('Deg')) return formatDegrees(value, name === 'offDeg' ? 4 : 2);
+  }
+  if (typeof value === 'boolean') return value ? 'yes' : 'no';
+  return typeof value === 'object' ? JSON.stringify(value) : String(value);
+}
+
+/** The facts of an event in one line for people: named, rounded, with units. Whole values stand in the archive. */
+export function eventFacts(data: Record<string, unknown>): string {
+  return Object.entries(data)
+    .filter(([name, value]) => !saidAbove.has(name) && value !== '' && value !== null)
+    .map(([name, value]) => `${names[name] ?? name} ${valueWords(name, value)}`)
+    .join(' · ');
+}

@@ -1,0 +1,13 @@
+import { eventFacts } from '@/components/runs/event-facts';
+
+test('a link that came back shows its gap rounded, with the unit', () => {
+  expect(eventFacts({ bootId: '0E9F6701', firmware: 'simulated', gapS: 1.829692653 })).toBe('boot id 0E9F6701 · firmware simulated · gap 1.8 s');
+});
+
+test('angles carry their unit, and what the row says already is not repeated', () => {
+  expect(eventFacts({ seq: 4, path: '4.swing', outcome: 'done', angleDeg: -20.18 })).toBe('outcome done · angle −20.18°');
+});
+
+test('what is empty is left out and a truth is said in a word', () => {
+  expect(eventFacts({ reason: '', code: null, confirmed: true })).toBe('confirmed yes');
+});
