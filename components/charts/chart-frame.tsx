@@ -38,7 +38,9 @@ export function roomy(values: readonly number[], share = 0.08): [number, number]
   if (finite.length === 0) return [0, 1];
   const least = Math.min(...finite);
   const greatest = Math.max(...finite);
-  const room = (greatest - least) * share || Math.abs(greatest) * 0.01 || 1;
+  const span = greatest - least;
+  // Values that differ in their last digits only are one value.
+  const room = span > Math.abs(greatest) * 1e-9 ? span * share : Math.abs(greatest) * 0.01 || 1;
   return [least - room, greatest + room];
 }
 

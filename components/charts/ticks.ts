@@ -10,12 +10,16 @@ function niceStep(span: number, count: number): number {
   return decade * (roundSteps.find((step) => step * decade >= raw * 0.999_999) ?? 10);
 }
 
+const greatestIndex = 1e12;
+
 /** Round values within [from, to], about `count` of them, and the decimals they need. */
 export function niceTicks(from: number, to: number, count: number): { values: number[]; decimals: number } {
   const step = niceStep(to - from, count);
-  const values: number[] = [];
-  for (let index = Math.ceil(from / step - 1e-9); index * step <= to + step * 1e-9; index += 1)
-    values.push(index * step === 0 ? 0 : index * step);
+  const first = Math.ceil(from / step - 1e-9);
+  const last = Math.floor(to / step + 1e-9);
+  // Closer to each other than numbers of this size can be told apart.
+  if (Math.max(Math.abs(first), Math.abs(last)) > greatestIndex) return { values: [], decimals: 0 };
+  const values = Array.from({ length: Math.max(0, last - first + 1) }, (_, k) => (first + k === 0 ? 0 : (first + k) * step));
   const twoDigits = Math.abs(step / 10 ** Math.floor(Math.log10(step)) - 2.5) < 1e-9;
   return { values, decimals: Math.max(0, -Math.floor(Math.log10(step) + 1e-9) + (twoDigits ? 1 : 0)) };
 }

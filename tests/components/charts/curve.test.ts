@@ -47,3 +47,7 @@ test('zooming keeps the point under the finger and stays within the data', () =>
   expect(panned(closer, whole, -1e9).from).toBe(0);
   expect(panned(closer, whole, 1e9).to).toBe(1_000_000);
 });
+
+test('a span too small to count in ends at once without ticks', () => {
+  expect(niceTicks(2.374, 2.374 + Number.EPSILON * 2, 5).values).toEqual([]);
+});
