@@ -16,7 +16,7 @@ import { ServerRigStations } from './rig-stations';
 import { SimulatedApparatus } from './simulated-apparatus';
 
 const engineItself = { id: null, name: 'the run engine' };
-const shortestLeaseMs = 5_000;
+const shortestLeaseMs = 3_000;
 
 export interface RigSide {
   arms: MemoryArmKeeper;

@@ -22,7 +22,7 @@ interface RigKey {
 
 /** So often within its length a lease is renewed. */
 const renewals = 3;
-const retryMs = 500;
+const retryMs = 250;
 
 /** Leases of the rigs that this process drives: no rig has two drivers. */
 export class LeaseKeeper {
