@@ -49,10 +49,19 @@ export function verifyChain(events: Iterable<ChainedEvent>, sha256: Sha256): Cha
         seq: event.seq,
         why: `event ${event.seq} does not follow from the event before it: prev is not that event's hash`,
       };
-    const { hash, ...unhashed } = event;
-    if (sha256(canonicalJson(unhashed)) !== hash)
+    if (hashOf(event, sha256) !== event.hash)
       return { valid: false, seq: event.seq, why: `event ${event.seq} was changed: its hash does not match its content` };
-    head = { seq: event.seq, hash };
+    head = { seq: event.seq, hash: event.hash };
   }
   return { valid: true, events: head.seq, head };
+}
+
+/** What the hash of an event must be; null where its content has no canonical JSON (a number beyond all doubles) and so cannot have one. */
+function hashOf(event: ChainedEvent, sha256: Sha256): string | null {
+  try {
+    // What is undefined has no place in canonical JSON.
+    return sha256(canonicalJson({ ...event, hash: undefined }));
+  } catch {
+    return null;
+  }
 }

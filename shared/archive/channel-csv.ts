@@ -1,4 +1,4 @@
-import { readCsv } from './csv-text';
+import { numberOfCell, readCsv } from './csv-text';
 import { formatInstant, instantReader } from './instants';
 import { UnusableArchive } from './unusable-archive';
 
@@ -74,8 +74,8 @@ function collector(file: string) {
       if (Number.isNaN(ms))
         throw new UnusableArchive({ file, row, column: 'time_utc' }, `"${time}" is not a UTC time such as 2026-03-01T22:00:00.000Z`);
       if (ms <= last) throw new UnusableArchive({ file, row, column: 'time_utc' }, `${time} is not later than the time of the row before`);
-      const reading = Number(cell);
-      if (!Number.isFinite(reading) || cell.trim() === '') {
+      const reading = numberOfCell(cell);
+      if (!Number.isFinite(reading)) {
         throw new UnusableArchive(
           { file, row, column: 'value' },
           `"${cell.trim()}" is not a number; leave out the rows that hold no reading`,

@@ -15,6 +15,14 @@ export function textOfCell(cell: string): string {
   return cell.startsWith("'") && formulaStart.test(cell.slice(1)) ? cell.slice(1) : cell;
 }
 
+const decimal = /^[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?$/;
+
+/** The decimal number in a cell, NaN where it holds none. Hexadecimal and the like, which JavaScript would read, are none. */
+export function numberOfCell(cell: string): number {
+  const text = cell.trim();
+  return decimal.test(text) ? Number(text) : NaN;
+}
+
 /** One line of cells, quoted where the cell needs it. */
 export function csvLine(cells: readonly string[]): string {
   return `${cells.map((cell) => (/[",\r\n]/.test(cell) ? `"${cell.replaceAll('"', '""')}"` : cell)).join(',')}\n`;
@@ -66,8 +74,19 @@ function parseRecords(file: string, text: string): ParsedRecord[] {
   try {
     return parse(text, { bom: true, info: true, relax_column_count: true, skip_empty_lines: true }) as unknown as ParsedRecord[];
   } catch (error) {
-    if (error instanceof CsvError)
-      throw new UnusableArchive({ file, row: Number(error.lines ?? 0) }, `not readable as CSV: ${error.message}`);
-    throw error;
+    if (!(error instanceof CsvError)) throw error;
+    if (error.code === 'CSV_QUOTE_NOT_CLOSED')
+      throw new UnusableArchive({ file, row: openQuoteRow(text) }, 'not readable as CSV: a quotation mark opens here that nothing closes');
+    throw new UnusableArchive({ file, row: Number(error.lines ?? 0) }, `not readable as CSV: ${error.message}`);
   }
+}
+
+/** The line in which the quotation mark stands that is still open at the end. */
+function openQuoteRow(text: string): number {
+  let open = 0;
+  text.split('\n').forEach((line, index) => {
+    const changes = (line.split('"').length - 1) % 2 === 1;
+    if (changes) open = open === 0 ? index + 1 : 0;
+  });
+  return open;
 }

@@ -19,7 +19,7 @@ export function exclusionsCsv(exclusions: readonly Exclusion[]): string {
 
 /** @throws UnusableArchive naming the row of a stretch without a start or an end, or with its end before its start. */
 export function readExclusions(text: string): Exclusion[] {
-  return readCsv(exclusionsFile, text, exclusionColumns).map((line) => {
+  return readCsv(exclusionsFile, text, ['start_utc', 'end_utc']).map((line) => {
     const [startUtcMs, endUtcMs] = (['start_utc', 'end_utc'] as const).map((column) => {
       const ms = parseInstant(line.cell(column).trim());
       if (Number.isNaN(ms)) {

@@ -1,14 +1,25 @@
 import * as z from 'zod';
 import { protocolDocumentSchema, registeredEvaluationSchema, type ProtocolDocument } from '../protocol/document';
-import { rigDocumentSchema, type RigDocument } from '../rig/document';
+import type { RigDocument } from '../rig/document';
 import type { ArchiveFiles, ArchiveWarning, Sha256OfBytes } from './archive-types';
-import { channelPath, readChannel } from './channel-csv';
+import { readArchivedRig } from './archived-rig';
+import { channelPath, readChannel, type SampleColumns } from './channel-csv';
 import { exclusionsFile, readExclusions, type Exclusion } from './exclusions';
-import type { ChannelInfo, ChannelSeries, StepRow } from './run-records';
+import type { ChannelInfo, StepRow } from './run-records';
 import { readSteps, stepsFile } from './step-csv';
-import { UnusableArchive } from './unusable-archive';
+import { firstIssue, UnusableArchive } from './unusable-archive';
 import { readPackage, verifyFiles, type PackageDescriptor, type ResourceDescriptor } from './verify-package';
 import { verifyArchived, verifyEvents, type ArchiveChain } from './verify-events';
+
+/** A channel as the archive describes it; the role is whatever the writer put there, `deflection` the one that counts. */
+export interface ArchivedChannel extends Omit<ChannelInfo, 'role'> {
+  role: string;
+}
+
+/** Samples of one channel: mid-exposure UTC ms and value in the channel's unit, in time order. */
+export interface ArchivedSeries extends SampleColumns {
+  info: ArchivedChannel;
+}
 
 /** A verified archive. Channels are read when asked for, so that a night's environment costs nothing to the evaluation. */
 export interface Archive {
@@ -20,9 +31,9 @@ export interface Archive {
   protocol: ProtocolDocument | null;
   exclusions: Exclusion[];
   chain: ArchiveChain;
-  channels: ChannelInfo[];
+  channels: ArchivedChannel[];
   /** @throws UnusableArchive naming the row of the first sample that cannot be read. */
-  readChannel(name: string): ChannelSeries;
+  readChannel(name: string): ArchivedSeries;
   warnings: ArchiveWarning[];
 }
 
@@ -39,7 +50,7 @@ export function readArchive(files: ArchiveFiles, sha256: Sha256OfBytes): Archive
   const verified = verifyEvents(inHand);
   verifyFiles(descriptor, inHand);
   verifyArchived(verified, inHand);
-  const rig = readJson(files, 'rig.json', rigDocumentSchema);
+  const rig = readArchivedRig(parseJson(files, 'rig.json'), warnings);
   const steps = readSteps(requiredText(files, stepsFile));
   const { protocol, registered } = readProtocol(files, warnings);
   const exclusions = files.has(exclusionsFile) ? readExclusions(requiredText(files, exclusionsFile)) : [];
@@ -90,20 +101,6 @@ function parseJson(files: ArchiveFiles, path: string): unknown {
   }
 }
 
-function readJson<S extends z.ZodType>(files: ArchiveFiles, path: string, schema: S): z.output<S> {
-  const parsed = schema.safeParse(parseJson(files, path));
-  if (!parsed.success) throw new UnusableArchive({ file: path }, firstIssue(parsed.error));
-  return parsed.data;
-}
-
-function firstIssue(error: z.ZodError): string {
-  const issue = error.issues[0];
-  const more = error.issues.length > 1 ? ` (and ${error.issues.length - 1} more)` : '';
-  return issue === undefined
-    ? 'not as the format has it'
-    : `${issue.path.length === 0 ? '' : `${issue.path.join('.')}: `}${issue.message}${more}`;
-}
-
 /** Only the registered evaluation matters here, so a protocol of a later version is warned of, not refused. */
 function readProtocol(files: ArchiveFiles, warnings: ArchiveWarning[]): Pick<Archive, 'protocol' | 'registered'> {
   if (!files.has('protocol.json')) return { protocol: null, registered: null };
@@ -119,28 +116,29 @@ function readProtocol(files: ArchiveFiles, warnings: ArchiveWarning[]): Pick<Arc
   return { protocol: null, registered: part.data.evaluation ?? null };
 }
 
+/** What a channel's resource says of it. Only a deflection's unit matters here, so that others may say less, or something else. */
 const channelFactsSchema = z.looseObject({
-  channel: z.string().min(1).optional(),
-  quantity: z.string().default(''),
-  unit: z.string(),
-  role: z.enum(['deflection', 'environment', 'turntable']),
+  channel: z.string().min(1).optional().catch(undefined),
+  quantity: z.string().catch(''),
+  unit: z.string().optional().catch(undefined),
+  role: z.string().catch(''),
 });
 
-function channelResources(descriptor: PackageDescriptor): { path: string; info: ChannelInfo }[] {
+function channelResources(descriptor: PackageDescriptor): { path: string; info: ArchivedChannel }[] {
   return descriptor.resources
     .filter(({ path }) => path.startsWith('channels/') && path.endsWith('.csv'))
     .map((resource) => ({ path: resource.path, info: channelInfo(resource) }));
 }
 
-function channelInfo(resource: ResourceDescriptor): ChannelInfo {
+function channelInfo(resource: ResourceDescriptor): ArchivedChannel {
   const facts = channelFactsSchema.safeParse(resource.evenfall ?? {});
-  if (!facts.success)
+  const { channel, quantity, unit, role } = facts.success ? facts.data : { quantity: '', role: '' };
+  if (role === 'deflection' && unit === undefined)
     throw new UnusableArchive(
       { file: 'datapackage.json' },
-      `the resource ${resource.path} must say evenfall: {quantity, unit, role}: ${firstIssue(facts.error)}`,
+      `the resource ${resource.path} must say evenfall: {quantity, unit, role}: unit is missing`,
     );
-  const { channel, quantity, unit, role } = facts.data;
   const fileName = resource.path.slice('channels/'.length, -'.csv'.length);
   const name = channel !== undefined && channelPath(channel) === resource.path ? channel : fileName;
-  return { name, quantity, unit, role };
+  return { name, quantity, unit: unit ?? '', role };
 }

@@ -33,8 +33,7 @@ export interface SimulatedRun {
   faults: { kind: string; atS: number }[];
 }
 
-export type StepRowKind =
-  | 'home' | 'swing' | 'dwell' | 'kick' | 'ring-down' | 'settle' | 'wait' | 'proof' | 'mark' | 'prompt' | 'rotate';
+export type StepRowKind = 'home' | 'swing' | 'dwell' | 'kick' | 'ring-down' | 'settle' | 'wait' | 'proof' | 'mark' | 'prompt' | 'rotate';
 
 export type StepOutcome = 'done' | 'cut short' | 'skipped' | 'failed' | 'late';
 

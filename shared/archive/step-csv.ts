@@ -1,4 +1,4 @@
-import { csvLine, readCsv, textCell, textOfCell, type CsvRow } from './csv-text';
+import { csvLine, numberOfCell, readCsv, textCell, textOfCell, type CsvRow } from './csv-text';
 import { formatInstant, parseInstant } from './instants';
 import type { StepOutcome, StepRow, StepRowKind } from './run-records';
 import { UnusableArchive } from './unusable-archive';
@@ -117,7 +117,7 @@ function refuse(line: CsvRow, column: string, why: string): never {
 function number(line: CsvRow, column: string): number | null {
   const cell = line.cell(column).trim();
   if (cell === '') return null;
-  const value = Number(cell);
+  const value = numberOfCell(cell);
   if (!Number.isFinite(value)) refuse(line, column, `"${cell}" is not a number`);
   return value;
 }

@@ -18,3 +18,11 @@ export class UnusableArchive extends Error {
     this.row = place.row ?? null;
   }
 }
+
+/** What is wrong with a document, in words: the first of the issues, and how many more there are. */
+export function firstIssue({ issues }: { issues: readonly { path: readonly PropertyKey[]; message: string }[] }): string {
+  const [issue] = issues;
+  if (issue === undefined) return 'not as the format has it';
+  const more = issues.length > 1 ? ` (and ${issues.length - 1} more)` : '';
+  return `${issue.path.length === 0 ? '' : `${issue.path.join('.')}: `}${issue.message}${more}`;
+}

@@ -1,5 +1,6 @@
 import * as z from 'zod';
 import type { ArchiveFiles, ArchiveInHand } from './archive-types';
+import { sha256In } from './sha256-text';
 import { UnusableArchive } from './unusable-archive';
 
 const packageFile = 'datapackage.json';
@@ -13,7 +14,7 @@ const resourceSchema = z.looseObject({
 
 const packageSchema = z.looseObject({
   resources: z.array(resourceSchema),
-  evenfall: z.looseObject({ formatVersion: z.number() }).optional(),
+  evenfall: z.looseObject({ formatVersion: z.number().optional() }).optional(),
 });
 
 export type ResourceDescriptor = z.infer<typeof resourceSchema>;
@@ -61,6 +62,18 @@ function parse(content: Uint8Array | string): unknown {
   }
 }
 
+/** Files that are read whether or not datapackage.json lists them. */
+const filesRead = ['rig.json', 'steps.csv', 'protocol.json', 'exclusions.csv'];
+
+/** The SHA-256 that a resource states; null where it states none, or a hash of another kind. */
+function expectedHash({ path, hash }: ResourceDescriptor): string | null {
+  if (hash === undefined) return null;
+  const expected = sha256In(hash);
+  if (expected === null && /^sha256:/i.test(hash))
+    throw new UnusableArchive({ file: path }, `its hash in datapackage.json, "${hash}", is no SHA-256: 64 hexadecimal digits are needed`);
+  return expected;
+}
+
 /**
  * Holds every listed file against its size and SHA-256; files without them are accepted with the warning `no-hashes`.
  * @throws UnusableArchive naming the file that is missing or was changed.
@@ -78,14 +91,14 @@ export function verifyFiles(descriptor: PackageDescriptor, { files, sha256, warn
         `the file has ${bytes.length} bytes, datapackage.json says ${resource.bytes}: it was changed`,
       );
     }
-    const expected = /^sha256:([0-9a-fA-F]{64})$/.exec(resource.hash ?? '')?.[1]?.toLowerCase();
-    if (expected !== undefined && sha256(bytes) !== expected) {
+    const expected = expectedHash(resource);
+    if (expected !== null && sha256(bytes) !== expected) {
       throw new UnusableArchive({ file: resource.path }, 'the SHA-256 of the file is not the one in datapackage.json: it was changed');
     }
-    if (resource.bytes === undefined || expected === undefined) unchecked.push(resource.path);
+    if (resource.bytes === undefined || expected === null) unchecked.push(resource.path);
   }
   const listed = new Set(descriptor.resources.map(({ path }) => path));
-  unchecked.push(...['rig.json', 'steps.csv'].filter((path) => !listed.has(path)));
+  unchecked.push(...filesRead.filter((path) => files.has(path) && !listed.has(path)));
   if (unchecked.length > 0) {
     warnings.push({
       code: 'no-hashes',

@@ -42,11 +42,11 @@ interface Term {
  */
 export function budgetOf(question: BudgetQuestion): Budget {
   const terms = [...rigTerms(question), ...observedTerms(question), ...axisTerm(question)];
-  const sum = terms.reduce((total, { line }) => total + line.contribution ** 2, 0);
+  const all = Math.hypot(...terms.map(({ line }) => line.contribution));
   const joined = joinGroups(terms);
-  const u = Math.sqrt(joined.reduce((total, { contribution }) => total + contribution ** 2, 0));
+  const u = Math.hypot(...joined.map(({ contribution }) => contribution));
   const lines = terms
-    .map(({ line }) => ({ ...line, share: sum === 0 ? 0 : line.contribution ** 2 / sum }))
+    .map(({ line }) => ({ ...line, share: all === 0 ? 0 : (line.contribution / all) ** 2 }))
     .sort((a, b) => b.contribution - a.contribution);
   return { lines, u, degreesOfFreedom: effectiveDegreesOfFreedom(joined) };
 }

@@ -1,4 +1,4 @@
-import type { ChannelInfo } from '../archive/run-records';
+import type { ArchivedChannel } from '../archive/read-archive';
 import { UnusableArchive } from '../archive/unusable-archive';
 import { angleRadOfSpot, leverOf, spotM, type Lever } from '../physics/lever';
 import type { RigDocument } from '../rig/document';
@@ -13,7 +13,7 @@ const angleUnits: Record<string, number> = { rad: 1, mrad: 1e-3, urad: 1e-6 };
 const lengthUnits: Record<string, number> = { m: 1, mm: 1e-3 };
 
 /** @throws UnusableArchive for a unit that is no deflection, or a length without a lever in rig.json. */
-export function scaleOf(info: ChannelInfo, rig: RigDocument): ChannelScale {
+export function scaleOf(info: ArchivedChannel, rig: RigDocument): ChannelScale {
   const radPerUnit = angleUnits[info.unit];
   if (radPerUnit !== undefined) return { kind: 'angle', radPerUnit };
   const metresPerUnit = lengthUnits[info.unit];

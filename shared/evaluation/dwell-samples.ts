@@ -1,5 +1,5 @@
 import { exclusionTest, type Exclusion } from '../archive/exclusions';
-import type { ChannelSeries } from '../archive/run-records';
+import type { SampleColumns } from '../archive/channel-csv';
 import { boxAverage, medianInterval, type BoxAverages } from '../statistics/box-average';
 import { toRad, type ChannelScale } from './channel-scale';
 import type { DwellWindow } from './dwell-windows';
@@ -14,7 +14,7 @@ export interface DwellSamples {
 }
 
 /** The samples inside a window that no exclusion covers. */
-export function samplesIn(window: DwellWindow, series: ChannelSeries, exclusions: readonly Exclusion[]): DwellSamples {
+export function samplesIn(window: DwellWindow, series: SampleColumns, exclusions: readonly Exclusion[]): DwellSamples {
   const from = firstAtOrAfter(series.utcMs, window.fromUtcMs);
   const to = firstAtOrAfter(series.utcMs, window.toUtcMs);
   const touching = exclusions.filter((one) => one.endUtcMs >= window.fromUtcMs && one.startUtcMs <= window.toUtcMs);

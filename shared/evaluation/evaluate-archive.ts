@@ -61,8 +61,8 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     },
     budget: budget?.lines ?? null,
     monteCarlo: null,
-    ...(archive.steps.some(({ kind }) => kind === 'swing') ? {} : { pretend: null }),
-    warnings: [...archive.warnings, ...warningsOf(archive.rig, analysis)],
+    ...(hasSwings(archive) ? {} : { pretend: null }),
+    warnings: [...archive.warnings, ...warningsOf(archive, analysis)],
   };
   return { result, curves: curvesOf(analysis) };
 }
@@ -193,13 +193,20 @@ function curvesOf({ segments, found }: Analysis): FitCurve[] {
   });
 }
 
-function warningsOf(rig: RigDocument, { reversal, free, solution }: Analysis): ArchiveWarning[] {
+const hasSwings = ({ steps }: Archive) => steps.some(({ kind }) => kind === 'swing');
+
+const noReversal: ArchiveWarning = {
+  code: 'few-dwells',
+  message: 'No near and far dwell that count follow each other, so there is neither a difference nor a G.',
+};
+
+function warningsOf(archive: Archive, { reversal, free, solution }: Analysis): ArchiveWarning[] {
   const warnings: ArchiveWarning[] = [];
-  const { omega0Squared, gamma } = free.disagreement;
-  if (omega0Squared !== null && omega0Squared > greatestDisagreement) {
+  const { omega, gamma } = free.disagreement;
+  if (omega !== null && omega > greatestDisagreement) {
     warnings.push({
       code: 'period-disagrees',
-      message: `The ring-down and measured.period_s of rig.json disagree by ${omega0Squared.toFixed(1)} u about the torsion constant; their weighted mean was used.`,
+      message: `The ring-down and measured.period_s of rig.json disagree by ${omega.toFixed(1)} u; their weighted mean was used.`,
     });
   }
   if (gamma !== null && gamma > greatestDisagreement) {
@@ -208,7 +215,14 @@ function warningsOf(rig: RigDocument, { reversal, free, solution }: Analysis): A
       message: `The ring-down and measured.decayTime_s of rig.json disagree by ${gamma.toFixed(1)} u; their weighted mean was used.`,
     });
   }
-  if (reversal === null) return warnings;
+  if (free.decayTime === null) {
+    warnings.push({
+      code: 'decay-unknown',
+      message:
+        'Neither the dwells nor measured.decayTime_s tell how fast the ringing dies away, so the torsion constant was taken without damping: it is too small.',
+    });
+  }
+  if (reversal === null) return hasSwings(archive) ? [...warnings, noReversal] : warnings;
   const dwells = reversal.members.length;
   if (dwells < enoughDwells) {
     const consequence =
@@ -221,6 +235,7 @@ function warningsOf(rig: RigDocument, { reversal, free, solution }: Analysis): A
       message: 'The dwells that count do not alternate between near and far, so a polynomial drift was removed instead of ABA windows.',
     });
   }
+  const { rig } = archive;
   const near = rig.stations.near;
   if (solution !== null && near !== undefined && torquePerG(geometryOf(rig), near.value * RAD_PER_DEG) < 0) {
     warnings.push({

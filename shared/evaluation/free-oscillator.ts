@@ -19,10 +19,10 @@ export interface FreeOscillator {
   period: Known;
   /** 1/γ, s; null where the amplitude does not fall. */
   decayTime: Known | null;
-  /** Share of the ring-down in ω₀² and in γ; the rest is the measured one's. */
-  ringDownShare: { omega0Squared: number; gamma: number };
+  /** Share of the ring-down in ω and in γ; the rest is the measured one's. */
+  ringDownShare: { omega: number; gamma: number };
   /** |ring-down − measured| in units of their joint u; null where there is only one. */
-  disagreement: { omega0Squared: number | null; gamma: number | null };
+  disagreement: { omega: number | null; gamma: number | null };
 }
 
 export interface MeasuredOscillator {
@@ -43,35 +43,28 @@ export function measuredOscillator(rig: RigDocument): MeasuredOscillator {
 }
 
 /**
- * Means weighted by u⁻² of what the ring-down and the measurement say about κ/I = ω² + γ² and about γ.
- * Null when neither says anything about the frequency.
+ * Means weighted by u⁻² of what the ring-down and the measurement say about ω and about γ, and κ/I = ω² + γ² of these means, so that a
+ * well known period counts in full beside a poorly known decay time. Null when neither says anything about the frequency.
  */
 export function combine(ringDown: RingDownResult | null, measured: MeasuredOscillator): FreeOscillator | null {
+  const omegas = present([ringDown === null ? null : fitted(ringDown, 0), measured.omega]);
+  if (omegas.length === 0) return null;
   const gammas = present([ringDown === null ? null : fitted(ringDown, 1), measured.gamma]);
   if (gammas.length === 0) gammas.push({ value: 0, u: 0, nu: Infinity });
+  const omega = meanOf(omegas);
   const gamma = meanOf(gammas);
-  const squares = present([
-    ringDown === null ? null : squareOfRingDown(ringDown),
-    measured.omega === null ? null : squareOfMeasured(measured.omega, measured.gamma ?? gamma.known),
-  ]);
-  if (squares.length === 0) return null;
-  const omega0Squared = meanOf(squares);
-  const periods = present([
-    ringDown === null ? null : periodOf(fitted(ringDown, 0)),
-    measured.omega === null ? null : periodOf(measured.omega),
-  ]);
-  const omegaSquared = omega0Squared.known.value - gamma.known.value ** 2;
+  const ringDownShare = {
+    omega: ringDown === null ? 0 : (omega.weights[0] as number),
+    gamma: ringDown === null ? 0 : (gamma.weights[0] as number),
+  };
+  const covariance = ringDown === null ? 0 : ringDownShare.omega * ringDownShare.gamma * at(ringDown.covariance, 0, 1);
   return {
-    omega0Squared: omega0Squared.known,
+    omega0Squared: squareOf(omega.known, gamma.known, covariance),
     gamma: gamma.known,
-    period: { value: (2 * Math.PI) / Math.sqrt(omegaSquared), u: meanOf(periods).known.u, nu: meanOf(periods).known.nu },
-    decayTime:
-      gamma.known.value > 0 ? { value: 1 / gamma.known.value, u: gamma.known.u / gamma.known.value ** 2, nu: gamma.known.nu } : null,
-    ringDownShare: {
-      omega0Squared: ringDown === null ? 0 : (omega0Squared.weights[0] as number),
-      gamma: ringDown === null ? 0 : (gamma.weights[0] as number),
-    },
-    disagreement: { omega0Squared: disagreementOf(squares), gamma: gammas.length < 2 ? null : disagreementOf(gammas) },
+    period: reciprocal(2 * Math.PI, omega.known),
+    decayTime: gamma.known.value > 0 ? reciprocal(1, gamma.known) : null,
+    ringDownShare,
+    disagreement: { omega: disagreementOf(omegas), gamma: disagreementOf(gammas) },
   };
 }
 
@@ -85,19 +78,16 @@ function fitted(ringDown: RingDownResult, index: 0 | 1): Known {
   };
 }
 
-function squareOfRingDown({ omega, gamma, covariance, degreesOfFreedom }: RingDownResult): Known {
-  const variance = omega ** 2 * at(covariance, 0, 0) + 2 * omega * gamma * at(covariance, 0, 1) + gamma ** 2 * at(covariance, 1, 1);
-  return { value: omega ** 2 + gamma ** 2, u: 2 * Math.sqrt(Math.max(variance, 0)), nu: degreesOfFreedom };
+/** ω² + γ²; its degrees of freedom are those of ω, which makes nearly all of it. */
+function squareOf(omega: Known, gamma: Known, covariance: number): Known {
+  const variance = (omega.value * omega.u) ** 2 + (gamma.value * gamma.u) ** 2 + 2 * omega.value * gamma.value * covariance;
+  return { value: omega.value ** 2 + gamma.value ** 2, u: 2 * Math.sqrt(Math.max(variance, 0)), nu: omega.nu };
 }
 
-function squareOfMeasured(omega: Known, gamma: Known): Known {
-  return { value: omega.value ** 2 + gamma.value ** 2, u: 2 * Math.hypot(omega.value * omega.u, gamma.value * gamma.u), nu: omega.nu };
-}
-
-const periodOf = (omega: Known): Known => ({
-  value: (2 * Math.PI) / omega.value,
-  u: (2 * Math.PI * omega.u) / omega.value ** 2,
-  nu: omega.nu,
+const reciprocal = (numerator: number, { value, u, nu }: Known): Known => ({
+  value: numerator / value,
+  u: (numerator * u) / value ** 2,
+  nu,
 });
 
 function meanOf(values: readonly Known[]): { known: Known; weights: number[] } {

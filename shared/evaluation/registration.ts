@@ -46,7 +46,10 @@ function chooseChannel(archive: Archive, wanted: string | null): string {
   if (wanted === null) {
     const [only, ...others] = deflections;
     if (only === undefined)
-      throw new UnusableArchive({ file: 'datapackage.json' }, 'the archive holds no channel with the role deflection');
+      throw new UnusableArchive(
+        { file: 'datapackage.json' },
+        `the archive holds no channel with the role deflection; its channels: ${listOf(archive.channels.map(({ name }) => name))}`,
+      );
     if (others.length > 0)
       throw new UnusableArchive(
         { file: 'datapackage.json' },
@@ -60,7 +63,7 @@ function chooseChannel(archive: Archive, wanted: string | null): string {
   if (found.role !== 'deflection')
     throw new UnusableArchive(
       { file: 'datapackage.json' },
-      `the channel "${wanted}" has the role ${found.role}; deflection channels: ${names}`,
+      `the channel "${wanted}" has ${found.role === '' ? 'no role' : `the role ${found.role}`}; deflection channels: ${names}`,
     );
   return found.name;
 }

@@ -5,16 +5,23 @@ import * as z from 'zod';
 const withU = z.strictObject({ value: z.number(), u: z.number() });
 
 const dwellResultSchema = z.strictObject({
-  seq: z.number().int(), station: z.string(),
+  seq: z.number().int(),
+  station: z.string(),
   /** Fitted centre at mid-dwell, drift not removed. */
   theta_rad: withU.nullable(),
-  samples: z.number().int(), used: z.boolean(), why: z.string().nullable(),
+  samples: z.number().int(),
+  used: z.boolean(),
+  why: z.string().nullable(),
 });
 
 const budgetLineSchema = z.strictObject({
-  input: z.string(), value: z.number(), u: z.number(),
+  input: z.string(),
+  value: z.number(),
+  u: z.number(),
   /** dG/dinput in the input's unit. */
-  sensitivity: z.number(), contribution: z.number(), share: z.number(),
+  sensitivity: z.number(),
+  contribution: z.number(),
+  share: z.number(),
 });
 
 export const evaluationResultSchema = z.strictObject({
@@ -23,14 +30,20 @@ export const evaluationResultSchema = z.strictObject({
   registered: z.boolean().nullable(),
   chain: z.strictObject({ events: z.number().int(), valid: z.literal(true).nullable() }),
   alignment: z.strictObject({ clockOffset_s: withU.nullable(), applied: z.boolean() }).nullable(),
-  period_s: withU.nullable(), decayTime_s: withU.nullable(), kappa_N_m: withU.nullable(),
+  period_s: withU.nullable(),
+  decayTime_s: withU.nullable(),
+  kappa_N_m: withU.nullable(),
   dwells: z.array(dwellResultSchema),
-  reversal_rad: z.strictObject({ value: z.number(), u: z.number().nullable(), count: z.number().int(), equivalence: z.unknown().optional() }).nullable(),
+  reversal_rad: z
+    .strictObject({ value: z.number(), u: z.number().nullable(), count: z.number().int(), equivalence: z.unknown().optional() })
+    .nullable(),
   G: z.strictObject({ value: z.number(), u: z.number().nullable(), degreesOfFreedom: z.number().nullable() }).nullable(),
   relativeU: z.number().nullable(),
   codata: z.strictObject({ value: z.number(), u: z.number(), En: z.number().nullable() }),
   budget: z.array(budgetLineSchema).nullable(),
-  monteCarlo: z.strictObject({ trials: z.number().int(), G_mean: z.number(), G_u: z.number(), interval95: z.tuple([z.number(), z.number()]) }).nullable(),
+  monteCarlo: z
+    .strictObject({ trials: z.number().int(), G_mean: z.number(), G_u: z.number(), interval95: z.tuple([z.number(), z.number()]) })
+    .nullable(),
   pretend: z.unknown().optional(),
   warnings: z.array(z.strictObject({ code: z.string(), message: z.string() })),
 });
@@ -40,8 +53,12 @@ export type DwellResult = z.infer<typeof dwellResultSchema>;
 
 /** What screens draw beside the result: the binned data of each dwell and the fitted curve through them. */
 export const fitCurveSchema = z.strictObject({
-  seq: z.number().int(), station: z.string(), startUtcMs: z.number(),
+  seq: z.number().int(),
+  station: z.string(),
+  startUtcMs: z.number(),
   /** Seconds after `startUtcMs`. */
-  tS: z.array(z.number()), dataRad: z.array(z.number()), modelRad: z.array(z.number()),
+  tS: z.array(z.number()),
+  dataRad: z.array(z.number()),
+  modelRad: z.array(z.number()),
 });
 export type FitCurve = z.infer<typeof fitCurveSchema>;

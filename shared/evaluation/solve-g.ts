@@ -70,12 +70,9 @@ export function freeAt(system: GSystem, bigG: number): { omega0Squared: number; 
     });
   }
   const { measured, share } = source;
+  const combinedOmega = share.omega * omega + (1 - share.omega) * (measured.omega?.value ?? 0);
   const combinedGamma = share.gamma * gamma + (1 - share.gamma) * (measured.gamma?.value ?? 0);
-  const measuredSquare = (measured.omega?.value ?? 0) ** 2 + (measured.gamma?.value ?? combinedGamma) ** 2;
-  return {
-    omega0Squared: share.omega0Squared * (omega ** 2 + gamma ** 2) + (1 - share.omega0Squared) * measuredSquare,
-    gamma: combinedGamma,
-  };
+  return { omega0Squared: combinedOmega ** 2 + combinedGamma ** 2, gamma: combinedGamma };
 }
 
 /** What the sources add to ω² at each angle, rad2/s2: G g'(φ − θ)/I at the equilibrium. */

@@ -28,6 +28,11 @@ describe('bad content is refused with file, row and column', () => {
       steps(row.replace('20.18,done', 'NaN,done')),
       'steps.csv, row 2, column angle_end_deg: "NaN" is not a number',
     ],
+    [
+      'an angle in another notation',
+      steps(row.replace('20.18,done', '0x14,done')),
+      'steps.csv, row 2, column angle_end_deg: "0x14" is not a number',
+    ],
     ['an unknown kind', steps(row.replace(',dwell,', ',nap,')), 'steps.csv, row 2, column kind: "nap" is none of home, swing, dwell'],
     ['an unknown outcome', steps(row.replace('done', 'fine')), 'steps.csv, row 2, column outcome: "fine" is none of done'],
     ['a number that comes twice', steps(row, row), 'steps.csv, row 3, column seq: 1 does not come after 1'],
@@ -79,6 +84,16 @@ describe('bad content is refused with file, row and column', () => {
     ],
     ['a value that is NaN', '2026-03-01T22:00:01.000Z,NaN\n', 'channels/deflection.csv, row 2, column value: "NaN" is not a number'],
     ['an empty value', '2026-03-01T22:00:01.000Z,\n', 'channels/deflection.csv, row 2, column value: "" is not a number'],
+    [
+      'a value in another notation',
+      '2026-03-01T22:00:01.000Z,0x10\n',
+      'channels/deflection.csv, row 2, column value: "0x10" is not a number',
+    ],
+    [
+      'a quotation mark that nothing closes',
+      '2026-03-01T22:00:01.000Z,1\n2026-03-01T22:00:02.000Z,"1\n2026-03-01T22:00:03.000Z,1\n',
+      'channels/deflection.csv, row 3: not readable as CSV: a quotation mark opens here',
+    ],
     ['a decimal comma', '2026-03-01T22:00:01.000Z,1,5\n', 'channels/deflection.csv, row 2, column value: "1,5" is not a number'],
     ['a time of another kind', '1772402400,1\n', 'channels/deflection.csv, row 2, column time_utc: "1772402400" is not a UTC time'],
     ['half a row', '2026-03-01T22:00:01.000Z\n', 'channels/deflection.csv, row 2: "2026-03-01T22:00:01.000Z" is not a time and a value'],

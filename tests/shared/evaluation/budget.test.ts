@@ -2,6 +2,7 @@ import type { EvaluationResult } from '@/shared/evaluation/result';
 import type { RigDocument } from '@/shared/rig/document';
 import { relativeDifference } from '../../support/check-data';
 import { evaluateNight } from '../../support/evaluate-night';
+import { normalDeviates } from '../../support/lcg';
 import { alternatingAngles, type NightPlan } from '../../support/night';
 import { closeRig, closeSourceAngleRad, wideRig, wideSourceAngleRad, withRig } from '../../support/reference-rigs';
 
@@ -169,6 +170,23 @@ describe('period and decay', () => {
     const { result } = evaluateNight({ ...wide, rig });
     expect(result.period_s?.value).toBeCloseTo(420, 3);
     expect(result.warnings.map(({ code }) => code)).not.toContain('period-disagrees');
+  });
+
+  test('a well known period counts in full beside a poorly known decay time, in the torsion constant too', () => {
+    const normal = normalDeviates(5);
+    const noisy = (r: RigDocument) => evaluateNight({ ...wide, rig: r, reading: (angle) => angle + 1e-5 * normal() }).result;
+    const exact = { period_s: { value: 420, u: 0, unit: 's' as const }, decayTime_s: { value: 1067.43, u: 500, unit: 's' as const } };
+    const result = noisy(withRig(wideRig(), (r) => (r.measured = exact)));
+    expect(result.period_s).toEqual({ value: 420, u: 0 });
+    // What is left is the ring-down's γ, a 256th of κ at Q 8.
+    expect(relativeDifference(result.kappa_N_m?.value ?? NaN, 5.211972603453e-8)).toBeLessThan(3e-5);
+  });
+
+  test('period, decay time and torsion constant belong together', () => {
+    const rig = withRig(wideRig(), (r) => (r.measured = { period_s: { value: 420.1, u: 1e-4, unit: 's' } }));
+    const { result } = evaluateNight({ ...wide, rig });
+    const omega0Squared = ((2 * Math.PI) / (result.period_s?.value ?? NaN)) ** 2 + (result.decayTime_s?.value ?? NaN) ** -2;
+    expect(relativeDifference(result.kappa_N_m?.value ?? NaN, 0.000231975 * omega0Squared)).toBeLessThan(1e-9);
   });
 
   test('that disagree by more than three u are warned of', () => {

@@ -116,6 +116,7 @@ describe('what cannot be computed is null', () => {
     expect(result).toMatchObject({ reversal_rad: null, G: null, relativeU: null, budget: null, codata: { En: null } });
     expect(result.period_s?.value).toBeCloseTo(420, 3);
     expect(result.dwells.every(({ station, used }) => station === 'near' && used)).toBe(true);
+    expect(codes(result)).toContain('few-dwells');
   });
 
   test('dwells elsewhere alone give a period', () => {
@@ -150,7 +151,7 @@ describe('what cannot be computed is null', () => {
     });
     const result = evaluateNight({ ...wide, rig, reading: () => (zero += 2e-7 * normal()) }).result;
     expect(result.period_s).toEqual({ value: 420, u: expect.closeTo(0.1, 12) as number });
-    expect(codes(result)).toEqual([]);
+    expect(codes(result)).toEqual(['decay-unknown']);
   });
 
   test('three dwells give a value without an uncertainty, and say so', () => {
