@@ -58,6 +58,7 @@ interface CrewParts {
 /** The workers of this process: one for each group of kinds. */
 export class JobCrew {
   private workers: { worker: JobWorker; queue: Watched }[] = [];
+  private ending = false;
 
   constructor(private readonly parts: CrewParts) {}
 
@@ -65,8 +66,11 @@ export class JobCrew {
     const { clock, log, pollMs, crews, queueFor } = this.parts;
     this.workers = Object.entries(crews).map(([name, handlers]) => {
       const queue = new Watched(queueFor(name));
-      const onProblem = ({ job, error }: { job: Job | null; error: unknown }) =>
-        log.error({ err: error as Error, job: job?.id ?? null, kind: job?.kind ?? null }, 'a job failed');
+      const onProblem = ({ job, error }: { job: Job | null; error: unknown }) => {
+        const about = { job: job?.id ?? null, kind: job?.kind ?? null };
+        if (this.ending) log.info(about, 'a job was cut short by the end of the server; the next one takes it up again');
+        else log.error({ err: error as Error, ...about }, 'a job failed');
+      };
       return { queue, worker: startJobWorker({ queue, clock, handlers, pollMs, onProblem }) };
     });
   }
@@ -79,7 +83,9 @@ export class JobCrew {
     await Promise.all(this.workers.map(({ queue }) => queue.idle()));
   }
 
+  /** No new jobs; resolves when those in hand are over, done or cut short. */
   async stop(): Promise<void> {
+    this.ending = true;
     await Promise.all(this.workers.map(({ worker }) => worker.stop()));
   }
 }
