@@ -6,7 +6,15 @@ const { cutting } = require('./scripts/lib/web-cuts.cjs');
 const config = getDefaultConfig(__dirname);
 
 const { resolveRequest } = config.resolver;
-config.resolver.resolveRequest = cutting(__dirname, (context, moduleName, platform) => (resolveRequest ?? context.resolveRequest)(context, moduleName, platform));
+config.resolver.resolveRequest = cutting(__dirname, (context, moduleName, platform) =>
+  (resolveRequest ?? context.resolveRequest)(context, moduleName, platform),
+);
+
+// In parentheses a module's function is compiled whole while the file is still arriving, instead of being skimmed then and compiled when the page starts.
+config.transformer.minifierConfig = {
+  ...config.transformer.minifierConfig,
+  output: { ...config.transformer.minifierConfig.output, wrap_func_args: true },
+};
 
 // In development the page comes from here and the API from the server: one origin, so cookies and live streams work as in production.
 config.server.enhanceMiddleware = (middleware) => (request, response, next) => {

@@ -2,10 +2,13 @@ import { createHash } from 'node:crypto';
 import { existsSync, mkdirSync, readFileSync, readdirSync, renameSync, rmSync, statSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import { root, state } from './paths.mjs';
+import { precompress } from './precompress.mjs';
 import { must } from './run.mjs';
 import { say, waiting } from './say.mjs';
 
-const sources = ['app', 'components', 'shared', 'assets', 'public', 'global.css', 'app.json', 'babel.config.js', 'metro.config.js', 'tailwind.config.js', 'tsconfig.json', 'package-lock.json'];
+const config = ['app.json', 'babel.config.js', 'metro.config.js', 'tailwind.config.js', 'tsconfig.json', 'package-lock.json'];
+const builders = ['web-build.mjs', 'web-cuts.cjs', 'no-native-stack.cjs', 'precompress.mjs'].map((name) => join('scripts', 'lib', name));
+const sources = ['app', 'components', 'shared', 'assets', 'public', 'global.css', ...config, ...builders];
 const stamp = join(state, 'web-build');
 
 function addTo(hash, path) {
@@ -34,6 +37,7 @@ export async function ensureWebBuild() {
   await waiting('waiting for the web build', () =>
     must(process.execPath, [expo, 'export', '--platform', 'web', '--output-dir', fresh], { cwd: root, env: { ...process.env, ...expoEnvironment } }),
   );
+  await precompress(fresh);
   rmSync(join(root, 'dist'), { recursive: true, force: true });
   renameSync(fresh, join(root, 'dist'));
   writeFileSync(stamp, digest);

@@ -1,6 +1,6 @@
-import { existsSync, readFileSync } from 'node:fs';
-import { join } from 'node:path';
-import express, { Router, type Response } from 'express';
+import { existsSync, readdirSync, readFileSync } from 'node:fs';
+import { extname, join, sep } from 'node:path';
+import express, { Router, type RequestHandler, type Response } from 'express';
 
 /** The built single page, or a plain page that says what is missing. */
 export function readIndexHtml(webDir: string | null): string {
@@ -11,22 +11,40 @@ export function readIndexHtml(webDir: string | null): string {
 
 const yearS = 31_536_000;
 
+const packedEnding = '.br';
+
 /** Names made by the bundler carry a hash of the content and never change; everything else is asked for again. */
-function setCaching(res: Response, path: string): void {
+function setHeaders(res: Response, path: string): void {
   const hashed = /[\\/]_expo[\\/]static[\\/]|[.-][0-9a-f]{20,}\./.test(path);
   res.set('Cache-Control', hashed ? `public, max-age=${String(yearS)}, immutable` : 'no-cache');
+  if (path.endsWith(packedEnding)) res.set('Content-Encoding', 'br').type(extname(path.slice(0, -packedEnding.length)));
+}
+
+/**
+ * Sends the Brotli copy that the build left beside a file to everybody who takes it; others get the file itself, packed on the way. The
+ * names of the copies are read once: a build replaces the whole folder, and the server begins anew with it.
+ */
+function preferPacked(webDir: string): RequestHandler {
+  const below = existsSync(webDir) ? readdirSync(webDir, { recursive: true, encoding: 'utf8' }) : [];
+  const packed = new Set(below.filter((path) => path.endsWith(packedEnding)).map((path) => `/${path.split(sep).join('/')}`));
+  return (req, res, next) => {
+    const path = `${req.path}${packedEnding}`;
+    if (packed.has(path)) {
+      res.vary('Accept-Encoding');
+      if (req.acceptsEncodings('br') === 'br') req.url = path;
+    }
+    next();
+  };
 }
 
 /** Files of the web application, and its one page for every other address. */
 export function webFiles(webDir: string | null, indexHtml: string): Router {
   const router = Router();
   if (webDir !== null) {
+    router.use(preferPacked(webDir));
     for (const folder of ['/_expo', '/assets'])
-      router.use(
-        folder,
-        express.static(join(webDir, folder), { fallthrough: false, index: false, redirect: false, setHeaders: setCaching }),
-      );
-    router.use(express.static(webDir, { index: false, redirect: false, setHeaders: setCaching }));
+      router.use(folder, express.static(join(webDir, folder), { fallthrough: false, index: false, redirect: false, setHeaders }));
+    router.use(express.static(webDir, { index: false, redirect: false, setHeaders }));
   }
   router.get('/{*rest}', (_req, res) => {
     res.set('Cache-Control', 'no-cache').type('html').send(indexHtml);

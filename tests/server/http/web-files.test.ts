@@ -1,62 +1,62 @@
-import { createHash } from 'node:crypto';
 import { mkdirSync, mkdtempSync, rmSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
+import { brotliCompressSync } from 'node:zlib';
+import compression from 'compression';
+import express from 'express';
 import request from 'supertest';
-import { appWith, counting, member, sent } from './framework-app';
+import { webFiles } from '@/server/http/web-files';
 
-describe('the web application', () => {
-  const folder = mkdtempSync(join(tmpdir(), 'evenfall-web-'));
-  const style = '#root{height:100%}';
-  beforeAll(() => {
-    mkdirSync(join(folder, '_expo/static/js'), { recursive: true });
-    writeFileSync(
-      join(folder, 'index.html'),
-      `<!doctype html><html><head><style id="reset">${style}</style></head><body><div id="root"></div><script src="/_expo/static/js/entry-0123456789abcdef0123.js" defer></script></body></html>`,
-    );
-    writeFileSync(join(folder, '_expo/static/js/entry-0123456789abcdef0123.js'), 'void 0');
-  });
-  afterAll(() => rmSync(folder, { recursive: true }));
-  const web = () => appWith([], { webDir: folder }).app;
+const script = `console.log(${JSON.stringify('evenfall '.repeat(400))});`;
+const hashed = '/_expo/static/js/web/entry-0123456789abcdef0123456789abcdef.js';
+const folder = mkdtempSync(join(tmpdir(), 'evenfall-web-'));
+mkdirSync(join(folder, '_expo/static/js/web'), { recursive: true });
+mkdirSync(join(folder, 'assets'));
+writeFileSync(join(folder, hashed), script);
+writeFileSync(join(folder, `${hashed}.br`), brotliCompressSync(script));
+writeFileSync(join(folder, 'theme.js'), 'document.title;');
+const app = express().use(compression(), webFiles(folder, '<!doctype html><title>Evenfall</title>'));
 
-  test('the policy allows what the build wrote by its hash, and nothing inline besides', async () => {
-    const policy = (await request(web()).get('/').expect(200)).headers['content-security-policy'] as string;
-    expect(policy).toContain(`'sha256-${createHash('sha256').update(style).digest('base64')}'`);
-    expect(policy).toContain("script-src 'self';");
-    expect(policy).not.toContain('unsafe');
-    expect(policy).toContain("frame-ancestors 'none'");
-  });
+afterAll(() => rmSync(folder, { recursive: true, force: true }));
 
-  test('every address that is no file gets the one page; a missing bundle is not found, without a path in the words', async () => {
-    expect((await request(web()).get('/runs/anything').expect(200)).text).toContain('id="root"');
-    const missing = await request(web()).get('/_expo/static/js/gone.js').expect(404);
-    expect(missing.text).not.toContain(folder);
-  });
+const ask = (path: string, encodings: string) => request(app).get(path).set('Accept-Encoding', encodings);
 
-  test('what carries a hash of its content in its name is kept for ever, the page is not', async () => {
-    expect((await request(web()).get('/_expo/static/js/entry-0123456789abcdef0123.js').expect(200)).headers['cache-control']).toContain(
-      'immutable',
-    );
-    expect((await request(web()).get('/').expect(200)).headers['cache-control']).toBe('no-cache');
+test('a browser that takes Brotli gets the copy the build packed, as the same script', async () => {
+  const answer = await ask(hashed, 'gzip, deflate, br');
+  expect(answer.status).toBe(200);
+  expect(answer.headers).toMatchObject({
+    'content-encoding': 'br',
+    'content-length': String(brotliCompressSync(script).length),
+    vary: 'Accept-Encoding',
   });
+  expect(answer.headers['content-type']).toMatch(/^text\/javascript/);
+  expect(answer.text).toBe(script);
+});
 
-  test('headers that a browser needs', async () => {
-    const { headers } = await request(web()).get('/').expect(200);
-    expect(headers).toMatchObject({ 'x-content-type-options': 'nosniff', 'referrer-policy': 'no-referrer' });
-    expect(headers['strict-transport-security']).toBeUndefined();
-    expect(headers['x-powered-by']).toBeUndefined();
-    const overTls = await request(appWith([], { webDir: folder, publicUrl: 'https://balance.quillfen.example' }).app)
-      .get('/')
-      .expect(200);
-    expect(overTls.headers['strict-transport-security']).toContain('max-age=31536000');
-  });
+test.each([
+  ['gzip', 'gzip'],
+  ['br;q=0, gzip', 'gzip'],
+  ['identity', undefined],
+])('who says "Accept-Encoding: %s" gets the script without Brotli', async (said, encoding) => {
+  const answer = await ask(hashed, said);
+  expect(answer.headers['content-encoding']).toBe(encoding);
+  expect(answer.headers['vary']).toBe('Accept-Encoding');
+  expect(answer.text).toBe(script);
+});
 
-  test('the log names the route and never what stands in an address, a header or a body', async () => {
-    const { app, logged } = appWith([counting()]);
-    await sent(request(app).post('/api/labs/lab/things?token=sesame')).set('Idempotency-Key', 'k').send({ word: 'opensesame' }).expect(201);
-    const line = logged.find((text) => text.includes('answered')) ?? '';
-    expect(JSON.parse(line)).toMatchObject({ method: 'POST', route: '/labs/:labId/things', status: 201 });
-    expect(line).not.toContain('sesame');
-    expect(line).not.toContain(member.token);
-  });
+test('a file with its hash in its name is kept for a year, packed or not; any other is asked for again', async () => {
+  for (const encodings of ['br', 'identity'])
+    expect((await ask(hashed, encodings)).headers['cache-control']).toBe('public, max-age=31536000, immutable');
+  expect((await ask('/theme.js', 'br')).headers['cache-control']).toBe('no-cache');
+  expect((await ask('/runs/17', 'br')).headers['cache-control']).toBe('no-cache');
+});
+
+test('a packed file known by its tag is not sent again', async () => {
+  const { etag } = (await ask(hashed, 'br')).headers;
+  const again = await ask(hashed, 'br').set('If-None-Match', String(etag));
+  expect(again.status).toBe(304);
+});
+
+test('a script of an earlier build is missing, not the page in its place', async () => {
+  expect((await ask('/_expo/static/js/web/entry-ffffffffffffffffffffffffffffffff.js', 'br')).status).toBe(404);
 });
