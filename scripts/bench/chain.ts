@@ -12,7 +12,11 @@ function chainOf(size: number): ChainedEvent[] {
   let head = emptyChain;
   for (let index = 0; index < size; index += 1) {
     const at = new Date(946_684_800_000 + index * 1000).toISOString();
-    const event = appendEvent(head, { at, kind: 'step-ended', data: { seq: index, path: `4.repeat[${index}].1.swing`, angleDeg: 20.18, outcome: 'done' } }, sha256);
+    const event = appendEvent(
+      head,
+      { at, kind: 'step-ended', data: { seq: index, path: `4.repeat[${index}].1.swing`, angleDeg: 20.18, outcome: 'done' } },
+      sha256,
+    );
     events.push(event);
     head = event;
   }

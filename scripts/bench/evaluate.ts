@@ -161,7 +161,10 @@ const points = [12, 24, 48].map((cycles) => {
   report({ name: `evaluate ${one.samples}`, value: cost, unit: 's', goal: 3, want: 'at most', peer: null });
   if (cycles === 48) {
     const value = best(5, () => fitAll(one.dwells));
-    report({ name: 'evaluate fit', value, unit: 's', goal: 0.2, want: 'at most', peer: sciPy(one.dwells, join(one.folder, '..')) });
+    const peer = sciPy(one.dwells, join(one.folder, '..'));
+    report({ name: 'evaluate fit', value, unit: 's', goal: 0.2, want: 'at most', peer });
+    if (peer !== null)
+      report({ name: 'evaluate fit against SciPy', value: peer / value, unit: '× faster', goal: 5, want: 'at least', peer: null });
   }
   rmSync(join(one.folder, '..'), { recursive: true });
   return { size: one.samples, cost };

@@ -1,20 +1,29 @@
-/** One measurement as one JSON line on stdout. `peer` is a limit or another program's figure from the same run. */
-export interface Measurement {
+interface Figure {
   name: string;
   value: number;
   unit: string;
-  goal: number;
-  /** Whether a smaller (`at most`) or a greater (`at least`) value than the goal is wanted. */
-  want: 'at most' | 'at least';
+  /** A limit, or another program's figure from the same run. */
   peer: number | null;
 }
 
+/** One measurement: whether a smaller (`at most`) or a greater (`at least`) value than the goal is wanted, or one between two. */
+export type Measurement = Figure & ({ goal: number; want: 'at most' | 'at least' } | { goal: readonly [number, number]; want: 'within' });
+
 const rounded = (value: number) => Number(value.toPrecision(5));
 
-export function report({ name, value, unit, goal, want, peer }: Measurement): void {
-  const ok = want === 'at most' ? value <= goal : value >= goal;
-  const line = { name, value: rounded(value), unit, goal, peer: peer === null ? null : rounded(peer), ratio: peer === null ? null : rounded(value / peer), ok };
-  process.stdout.write(`${JSON.stringify(line)}\n`);
+function meetsGoal(measurement: Measurement): boolean {
+  const { value } = measurement;
+  if (measurement.want === 'within') return measurement.goal[0] <= value && value <= measurement.goal[1];
+  return measurement.want === 'at most' ? value <= measurement.goal : value >= measurement.goal;
+}
+
+/** Prints a measurement as one JSON line on stdout. */
+export function report(measurement: Measurement): void {
+  const { name, value, unit, goal, peer } = measurement;
+  const [roundedPeer, ratio] = peer === null ? [null, null] : [rounded(peer), rounded(value / peer)];
+  process.stdout.write(
+    `${JSON.stringify({ name, value: rounded(value), unit, goal, peer: roundedPeer, ratio, ok: meetsGoal(measurement) })}\n`,
+  );
 }
 
 /** Exponent b of cost = a · sizeᵇ by least squares on the logarithms. */

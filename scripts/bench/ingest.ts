@@ -1,0 +1,148 @@
+import { createReadStream, createWriteStream, mkdtempSync, rmSync, statSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { Readable } from 'node:stream';
+import { pipeline } from 'node:stream/promises';
+import { from as copyFrom } from 'pg-copy-streams';
+import { demoIds } from '@/db/demo/seed';
+import { readCsv } from '@/server/ingest/csv-read';
+import { inTurns } from '@/server/ingest/receive-file';
+import * as store from '@/server/store/imports';
+import { insertRun } from '@/server/store/run-store';
+import type { ImportMapping } from '@/shared/contracts/data';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import { withDatabase, type BenchDatabase } from './lib/fresh-database';
+import { seedLab } from './lib/people';
+import { growth, report } from './report';
+
+/**
+ * Stores CSV files of deflection as the import does: read from the kept pieces, parsed, checked, stored under the table's
+ * key. The peer is PostgreSQL's own COPY of the same rows into the same table.
+ */
+
+const sizes = [100_000, 300_000, 1_000_000];
+const startUtcMs = Date.UTC(2026, 0, 1);
+const intervalMs = 100;
+const rowsAPiece = 20_000;
+const runId = '5eed0000-0000-4000-8000-000000000900';
+const { lab: labId, rig: rigId } = demoIds;
+
+const mapping: ImportMapping = {
+  delimiter: ',',
+  decimal: '.',
+  headerRow: true,
+  timeColumn: 0,
+  timeFormat: 'iso',
+  valueColumn: 1,
+  unit: 'rad',
+};
+
+/** A slow oscillation with the digits that a readout writes. */
+const deflectionRad = (row: number) => (2e-3 * Math.sin(row / 700) + 1e-7 * ((row * 7919) % 1000)).toFixed(9);
+const instant = (row: number) => new Date(startUtcMs + row * intervalMs).toISOString();
+
+function* rowsOf(rows: number, head: string, line: (row: number) => string): Generator<Buffer> {
+  yield Buffer.from(head);
+  for (let from = 0; from < rows; from += rowsAPiece) {
+    let text = '';
+    for (let row = from; row < Math.min(rows, from + rowsAPiece); row += 1) text += line(row);
+    yield Buffer.from(text);
+  }
+}
+
+const csvOf = (rows: number) => rowsOf(rows, 'time,deflection\n', (row) => `${instant(row)},${deflectionRad(row)}\n`);
+
+const seconds = async (work: () => Promise<unknown>) => {
+  const start = performance.now();
+  await work();
+  return (performance.now() - start) / 1000;
+};
+
+const channelOf = (name: string) => ({
+  labId,
+  rigId,
+  runId: null,
+  name,
+  quantity: 'pendulum angle',
+  unit: 'rad',
+  role: 'deflection' as const,
+  source: 'import' as const,
+  createdAt: startUtcMs,
+});
+
+/** Keeps the file as the upload does, then measures what the commit of the import does. */
+async function ingest(database: BenchDatabase, rows: number): Promise<number> {
+  const { connection } = database;
+  const file = await store.beginImport(connection.db, { labId, runId, fileName: 'bench.csv', createdAt: startUtcMs, createdBy: 'bench' });
+  const key = { labId, importId: file.id };
+  await store.keepPieces(connection.db, key, Readable.from(csvOf(rows)));
+  const work = { ...key, channel: channelOf(`file of ${String(rows)}`), storedAt: startUtcMs, mapping };
+  const limits = { greatestSpan: 0.06, nowUtcMs: startUtcMs + rows * intervalMs };
+  const breathe = () => new Promise<void>((resolve) => void setImmediate(resolve));
+  const cost = await seconds(async () => {
+    const { stored } = await store.storeImport(connection, work, async (take) => {
+      const pieces = inTurns(store.readPieces(connection.db, key), breathe);
+      const reading = await readCsv(pieces, { mapping, limits, take });
+      if (reading.problemCount > 0) throw new Error(reading.problems[0]?.message);
+    });
+    if (stored !== rows) throw new Error(`${String(stored)} of ${String(rows)} rows were stored`);
+  });
+  await store.dropPieces(connection.db, key);
+  return cost;
+}
+
+/** The same rows, written out beforehand, through COPY alone. */
+async function copy(database: BenchDatabase, { rows, folder }: { rows: number; folder: string }): Promise<number> {
+  const { id } = await store.findOrMakeChannel(database.connection.db, channelOf(`copy of ${String(rows)}`));
+  const path = join(folder, `${String(rows)}.csv`);
+  const line = (row: number) => `${labId},${id},${instant(row)},${deflectionRad(row)}\n`;
+  await pipeline(Readable.from(rowsOf(rows, '', line)), createWriteStream(path));
+  if (statSync(path).size === 0) throw new Error('the file of the benchmark is empty');
+  return seconds(() =>
+    database.connection.bulk((client) =>
+      pipeline(
+        createReadStream(path, { highWaterMark: 1 << 20 }),
+        client.query(copyFrom('copy samples (lab_id, channel_id, at, value) from stdin (format csv)')),
+      ),
+    ),
+  );
+}
+
+async function prepare(database: BenchDatabase): Promise<void> {
+  await seedLab(database);
+  const start = {
+    ...{ labId, runId, rigId, rigName: 'North bench', rigRevision: 1, rig: demoRigWide, massSetLabel: '', simulated: null, arm: null },
+    ...{ protocolName: 'Bench', protocolRevision: 1, timeZone: 'Europe/Zurich', operator: 'bench', notes: '' },
+    protocol: { formatVersion: 1 as const, name: 'Bench', steps: [{ kind: 'home' as const }] },
+  };
+  const row = { start, protocolId: null, massSetId: null, state: 'starting' as const, nowUtcMs: startUtcMs, predictedEndUtcMs: null };
+  if (!(await insertRun(database.connection.db, row))) throw new Error('the run of the benchmark was refused');
+}
+
+const greatestMemoryMiB = () => process.resourceUsage().maxRSS / 1024;
+
+async function run(): Promise<void> {
+  const folder = mkdtempSync(join(tmpdir(), 'evenfall-bench-ingest-'));
+  try {
+    await withDatabase(async (database) => {
+      await prepare(database);
+      await ingest(database, 20_000);
+      const points: { size: number; cost: number }[] = [];
+      for (const rows of sizes) {
+        const peer = rows / (await copy(database, { rows, folder }));
+        const cost = await ingest(database, rows);
+        points.push({ size: rows, cost });
+        const value = rows / cost;
+        report({ name: `ingest ${String(rows)}`, value, unit: 'rows/s', goal: 100_000, want: 'at least', peer });
+        if (rows === sizes.at(-1))
+          report({ name: 'ingest against COPY', value: value / peer, unit: '1', goal: 0.5, want: 'at least', peer: null });
+      }
+      report({ name: 'ingest growth', value: growth(points), unit: 'exponent', goal: 1.1, want: 'at most', peer: null });
+      report({ name: 'ingest memory', value: greatestMemoryMiB(), unit: 'MiB', goal: 300, want: 'at most', peer: null });
+    });
+  } finally {
+    rmSync(folder, { recursive: true });
+  }
+}
+
+void run();

@@ -1,0 +1,123 @@
+import { randomUUID } from 'node:crypto';
+import { Agent, request } from 'node:http';
+import { demoIds } from '@/db/demo/seed';
+import type { RunView } from '@/shared/contracts/runs';
+import type { ProtocolDocument } from '@/shared/protocol/document';
+
+interface Answer {
+  status: number;
+  etag: string;
+  body: unknown;
+}
+
+const agent = new Agent({ keepAlive: true });
+const runs = `/labs/${demoIds.lab}/runs`;
+const patienceMs = 30_000;
+
+export const pause = (ms: number): Promise<void> => new Promise((resolve) => void setTimeout(resolve, ms));
+
+/** A member of the demo lab at a server's address. Every request that is refused throws the server's own words. */
+export class LabClient {
+  constructor(
+    readonly address: string,
+    readonly cookie: string,
+  ) {}
+
+  get(path: string): Promise<Answer> {
+    return this.ask({ method: 'GET', path });
+  }
+
+  post(path: string, body: object, headers: Record<string, string> = {}): Promise<Answer> {
+    return this.ask({ method: 'POST', path, body, headers });
+  }
+
+  /** Makes a protocol and issues its first revision on the demo rig. Returns its id. */
+  async issue(document: ProtocolDocument): Promise<string> {
+    const made = await this.post(`/labs/${demoIds.lab}/protocols`, { document });
+    const { id } = made.body as { id: string };
+    await this.post(`/labs/${demoIds.lab}/protocols/${id}/revisions`, { rigId: demoIds.rig }, { 'If-Match': made.etag });
+    return id;
+  }
+
+  /** Waits until the simulated rig of a server that has just begun is ready for a start, and arms it for 12 h. */
+  async arm(): Promise<void> {
+    const rig = `/labs/${demoIds.lab}/rigs/${demoIds.rig}`;
+    await this.patiently('the link of the demo rig', async () => {
+      const { live } = (await this.get(rig)).body as { live: { condition: string } };
+      return live.condition === 'ready' || null;
+    });
+    const until = new Date(Date.now() + 12 * 3_600_000).toISOString();
+    await this.post(`${rig}/arm`, { name: 'Ilse Marrowby', until, cautionsRead: true });
+  }
+
+  /** Starts the first revision of a protocol on the demo rig as soon as the server lets it, and waits until it runs. Returns the run's id. */
+  async start(protocolId: string): Promise<string> {
+    const body = { rigId: demoIds.rig, protocolId, revision: 1, massSetId: demoIds.massSet };
+    const { id } = (await this.patiently('a start', () => this.post(runs, body))).body as { id: string };
+    await this.until(id, ({ state }) => state === 'running');
+    return id;
+  }
+
+  async run(runId: string): Promise<RunView> {
+    return (await this.get(`${runs}/${runId}`)).body as RunView;
+  }
+
+  intervene(runId: string, what: 'hold' | 'stop'): Promise<Answer> {
+    return this.post(`${runs}/${runId}/${what}`, {});
+  }
+
+  until(runId: string, there: (view: RunView) => boolean): Promise<RunView> {
+    return this.patiently('a run', async () => {
+      const view = await this.run(runId);
+      return there(view) ? view : null;
+    });
+  }
+
+  /** Looks again and again; what is refused may be let in the next time. */
+  private async patiently<T>(what: string, look: () => Promise<T | null>): Promise<T> {
+    let why: unknown = null;
+    for (const began = performance.now(); performance.now() - began < patienceMs;) {
+      try {
+        const found = await look();
+        if (found !== null) return found;
+      } catch (error) {
+        why = error;
+      }
+      await pause(20);
+    }
+    throw new Error(`${what} was waited for in vain`, { cause: why });
+  }
+
+  private ask({ method, path, body, headers }: { method: string; path: string; body?: object; headers?: object }): Promise<Answer> {
+    const text = body === undefined ? '' : JSON.stringify(body);
+    return new Promise((resolve, reject) => {
+      const asked = request(
+        `${this.address}/api${path}`,
+        {
+          method,
+          agent,
+          headers: {
+            Cookie: this.cookie,
+            Origin: this.address,
+            'Idempotency-Key': randomUUID(),
+            ...(text === '' ? {} : { 'Content-Type': 'application/json', 'Content-Length': Buffer.byteLength(text) }),
+            ...headers,
+          },
+        },
+        (response) => {
+          const parts: Buffer[] = [];
+          response.on('data', (part: Buffer) => parts.push(part));
+          response.on('error', reject);
+          response.on('end', () => {
+            const answer = Buffer.concat(parts).toString();
+            const status = response.statusCode ?? 0;
+            if (status >= 400) reject(new Error(`${method} ${path}: ${String(status)} ${answer}`));
+            else resolve({ status, etag: response.headers.etag ?? '', body: answer === '' ? null : (JSON.parse(answer) as unknown) });
+          });
+        },
+      );
+      asked.on('error', reject);
+      asked.end(text);
+    });
+  }
+}

@@ -1,0 +1,58 @@
+import { spawn, type ChildProcess } from 'node:child_process';
+import { once } from 'node:events';
+import { join } from 'node:path';
+import { createInterface } from 'node:readline';
+
+const root = join(__dirname, '..', '..', '..');
+
+export interface ServerSetting {
+  databaseUrl: string;
+  /** Folder for what the server keeps outside the database. */
+  stateDir: string;
+  /** Further variables of its environment. */
+  env?: Record<string, string>;
+}
+
+/** The server as people run it: a process of its own, on loopback, on a free port. */
+export class ServerProcess {
+  private constructor(
+    private readonly child: ChildProcess,
+    readonly address: string,
+  ) {}
+
+  /** Resolves as soon as the server says that it listens. */
+  static async start({ databaseUrl, stateDir, env }: ServerSetting): Promise<ServerProcess> {
+    const child = spawn(process.execPath, ['--import', 'tsx', 'server/boot/main.ts'], {
+      cwd: root,
+      stdio: ['ignore', 'pipe', 'inherit'],
+      env: {
+        ...process.env,
+        NODE_ENV: 'production',
+        DATABASE_URL: databaseUrl,
+        PORT: '0',
+        EVENFALL_STATE_DIR: stateDir,
+        EVENFALL_WEB_DIR: 'none',
+        EVENFALL_LOG_LEVEL: 'error',
+        EVENFALL_REQUESTS_PER_MINUTE: '1000000',
+        EVENFALL_INTERVENTIONS_PER_MINUTE: '1000000',
+        ...env,
+      },
+    });
+    const address = await new Promise<string>((resolve, reject) => {
+      child.once('exit', () => reject(new Error('the server ended before it listened')));
+      createInterface({ input: child.stdout as NonNullable<ChildProcess['stdout']> }).on('line', (line) => {
+        const at = /"listening":\s*"([^"]+)"/.exec(line)?.[1];
+        if (at !== undefined) resolve(at);
+      });
+    });
+    return new ServerProcess(child, address);
+  }
+
+  /** Ends the process and waits until it is gone. */
+  async end(signal: 'SIGTERM' | 'SIGKILL' = 'SIGTERM'): Promise<void> {
+    if (this.child.exitCode !== null || this.child.signalCode !== null) return;
+    const gone = once(this.child, 'exit');
+    this.child.kill(signal);
+    await gone;
+  }
+}
