@@ -51,7 +51,10 @@ async function main(): Promise<void> {
 
   const address = await server.listen();
   process.stdout.write(`${JSON.stringify(greeting(config, address, mailbox))}\n`);
-  await server.start();
+  await server.start().catch((error: unknown) => {
+    // What was still being taken up when the end came is let go of.
+    if (!ending) throw error;
+  });
 }
 
 /** One after another; what fails to end does not keep the rest from ending. */
