@@ -1,11 +1,9 @@
-import { createHash } from 'node:crypto';
 import { appendEvent, emptyChain, verifyChain } from '@/shared/archive/chain';
 import type { ChainedEvent } from '@/shared/archive/run-records';
+import { sha256Hex } from '@/server/evaluation/sha256';
 import { growth, report } from './report';
 
 /** Verifies chains of 10⁴, 10⁵ and 10⁶ events; the peer is the bare hashing of the same texts. */
-
-const sha256 = (text: string) => createHash('sha256').update(text).digest('hex');
 
 function chainOf(size: number): ChainedEvent[] {
   const events: ChainedEvent[] = [];
@@ -15,7 +13,7 @@ function chainOf(size: number): ChainedEvent[] {
     const event = appendEvent(
       head,
       { at, kind: 'step-ended', data: { seq: index, path: `4.repeat[${index}].1.swing`, angleDeg: 20.18, outcome: 'done' } },
-      sha256,
+      sha256Hex,
     );
     events.push(event);
     head = event;
@@ -32,10 +30,10 @@ const seconds = (work: () => void) => {
 const points = [10_000, 100_000, 1_000_000].map((size) => {
   const events = chainOf(size);
   const cost = seconds(() => {
-    if (!verifyChain(events, sha256).valid) throw new Error('the chain of the benchmark is not valid');
+    if (!verifyChain(events, sha256Hex).valid) throw new Error('the chain of the benchmark is not valid');
   });
   const texts = events.map((event) => JSON.stringify(event));
-  const peer = seconds(() => texts.forEach(sha256));
+  const peer = seconds(() => texts.forEach(sha256Hex));
   report({ name: `chain ${size}`, value: cost, unit: 's', goal: (10 * size) / 1_000_000, want: 'at most', peer });
   return { size, cost };
 });

@@ -1,6 +1,6 @@
-import { createHash } from 'node:crypto';
+import { hash } from 'node:crypto';
 
 /** SHA-256 in lower-case hex of bytes, or of a text as UTF-8. */
 export function sha256Hex(data: string | Uint8Array): string {
-  return createHash('sha256').update(data).digest('hex');
+  return hash('sha256', data, 'hex');
 }
