@@ -5,7 +5,12 @@ const [expoUntransformed, ...otherUntransformed] = require('jest-expo/web/jest-p
 const webUntransformed = [expoUntransformed.replace('(?!(', '(?!(temporal-polyfill|temporal-utils|'), ...otherUntransformed];
 const node = {
   testEnvironment: 'node',
-  transform: { '\\.[jt]sx?$': ['babel-jest', { configFile: false, presets: ['@babel/preset-typescript'], plugins: ['@babel/plugin-transform-modules-commonjs'] }] },
+  transform: {
+    '\\.[jt]sx?$': [
+      'babel-jest',
+      { configFile: false, presets: ['@babel/preset-typescript'], plugins: ['@babel/plugin-transform-modules-commonjs'] },
+    ],
+  },
   transformIgnorePatterns: untransformed,
   moduleNameMapper: alias,
   modulePathIgnorePatterns: ['<rootDir>/dist', '<rootDir>/.state'],

@@ -10,7 +10,11 @@ const [name, ...args] = process.argv.slice(2);
 if (!['evaluate', 'rehearse', 'plan'].includes(name)) giveUp(`unknown command ${name}: evaluate, rehearse or plan`);
 await ensureNodeModules();
 const cwd = process.env.INIT_CWD ?? process.cwd();
-process.exitCode = await pass(process.execPath, ['--import', join(root, 'node_modules/tsx/dist/loader.mjs'), join(root, 'server', 'boot', `${name}.ts`), ...args], {
-  cwd,
-  env: { ...process.env, TSX_TSCONFIG_PATH: join(root, 'tsconfig.json') },
-});
+process.exitCode = await pass(
+  process.execPath,
+  ['--import', join(root, 'node_modules/tsx/dist/loader.mjs'), join(root, 'server', 'boot', `${name}.ts`), ...args],
+  {
+    cwd,
+    env: { ...process.env, TSX_TSCONFIG_PATH: join(root, 'tsconfig.json') },
+  },
+);

@@ -21,7 +21,19 @@ const webPort = process.env.PORT ?? String(await freePort());
 const env = { ...process.env, DATABASE_URL: databaseUrl, PORT: apiPort, EVENFALL_DEMO: '1', EVENFALL_STATE_DIR: state };
 
 const children = [
-  spawn(process.execPath, ['--watch-path=server', '--watch-path=shared', '--watch-path=db', '--watch-path=firmware-protocol', '--import', 'tsx', 'server/boot/main.ts'], { cwd: root, stdio: 'inherit', env }),
+  spawn(
+    process.execPath,
+    [
+      '--watch-path=server',
+      '--watch-path=shared',
+      '--watch-path=db',
+      '--watch-path=firmware-protocol',
+      '--import',
+      'tsx',
+      'server/boot/main.ts',
+    ],
+    { cwd: root, stdio: 'inherit', env },
+  ),
   spawn(process.execPath, [join(root, 'node_modules/expo/bin/cli'), 'start', '--web', '--port', webPort], {
     cwd: root,
     stdio: 'inherit',
@@ -40,5 +52,9 @@ process.on('SIGINT', end);
 process.on('SIGTERM', end);
 await Promise.race(children.map((child) => new Promise((resolve) => child.on('close', resolve))));
 end();
-await Promise.all(children.map((child) => (child.exitCode === null && child.signalCode === null ? new Promise((resolve) => child.on('close', resolve)) : null)));
+await Promise.all(
+  children.map((child) =>
+    child.exitCode === null && child.signalCode === null ? new Promise((resolve) => child.on('close', resolve)) : null,
+  ),
+);
 await cluster.stop();

@@ -91,36 +91,32 @@ async function seedRig(tx: Handle, nowUtcMs: number): Promise<void> {
   const keeper = withRole('keeper');
   const own = { labId: demoIds.lab, rigId: demoIds.rig };
   await tx.insert(schema.rigs).values({ labId: demoIds.lab, id: demoIds.rig, name: demoRigName, revision: 1, createdAt: nowUtcMs });
-  await tx
-    .insert(schema.rigRevisions)
-    .values({
-      ...own,
-      number: 1,
-      name: demoRigName,
-      document: demoRigWide,
-      reason: 'First measurement of the rig',
-      madeAt: nowUtcMs,
-      madeById: keeper.id,
-      madeBy: keeper.name,
-    });
+  await tx.insert(schema.rigRevisions).values({
+    ...own,
+    number: 1,
+    name: demoRigName,
+    document: demoRigWide,
+    reason: 'First measurement of the rig',
+    madeAt: nowUtcMs,
+    madeById: keeper.id,
+    madeBy: keeper.name,
+  });
   await tx.insert(schema.rigLinks).values({ ...own, settings: { kind: 'simulated' }, changedAt: nowUtcMs, changedBy: keeper.name });
   await tx.insert(schema.massSets).values([
     { ...own, id: demoIds.massSet, label: 'Lead spheres, 1.6 kg', sources: demoRigWide.sources, createdAt: nowUtcMs },
     // Mass sets are offered oldest first: the loaded one before the control.
     { ...own, id: demoIds.emptyControl, label: 'Empty control', sources: { shape: 'none' }, createdAt: nowUtcMs + 1 },
   ]);
-  await tx
-    .insert(schema.channels)
-    .values({
-      ...own,
-      id: demoIds.channel,
-      name: 'deflection',
-      quantity: 'pendulum angle',
-      unit: 'rad',
-      role: 'deflection',
-      source: 'simulated',
-      createdAt: nowUtcMs,
-    });
+  await tx.insert(schema.channels).values({
+    ...own,
+    id: demoIds.channel,
+    name: 'deflection',
+    quantity: 'pendulum angle',
+    unit: 'rad',
+    role: 'deflection',
+    source: 'simulated',
+    createdAt: nowUtcMs,
+  });
 }
 
 const documentOf = (templateId: string) => {

@@ -15,7 +15,8 @@ export async function startCluster(name) {
   const postgres = findPostgres() ?? giveUp('PostgreSQL is not installed: apt-get install postgresql');
   const home = await makeHome(name, postgres);
   const data = join(home, 'data');
-  if (!existsSync(join(data, 'PG_VERSION'))) await waiting(`making a PostgreSQL cluster in ${data}`, () => initialise(postgres, home, data));
+  if (!existsSync(join(data, 'PG_VERSION')))
+    await waiting(`making a PostgreSQL cluster in ${data}`, () => initialise(postgres, home, data));
   const running = await portOf(postgres, data);
   const port = running ?? (await waiting('waiting for PostgreSQL to start', () => launch({ postgres, home, data, name })));
   const password = readFileSync(join(home, 'password'), 'utf8').trim();
@@ -60,7 +61,18 @@ async function initialise(postgres, home, data) {
   writeFileSync(secret, `${randomBytes(24).toString('base64url')}\n`, { mode: 0o600 });
   if (isRoot()) chownSync(secret, Number(await must('id', ['-u', 'postgres'])), Number(await must('id', ['-g', 'postgres'])));
   rmSync(data, { recursive: true, force: true });
-  await asServer(postgres.bin, ['initdb', '-D', data, '-U', 'evenfall', '--auth=scram-sha-256', `--pwfile=${secret}`, '-E', 'UTF8', '--locale=C.UTF-8']);
+  await asServer(postgres.bin, [
+    'initdb',
+    '-D',
+    data,
+    '-U',
+    'evenfall',
+    '--auth=scram-sha-256',
+    `--pwfile=${secret}`,
+    '-E',
+    'UTF8',
+    '--locale=C.UTF-8',
+  ]);
 }
 
 /** The port of a cluster that runs in `data`, or null. */
@@ -84,7 +96,8 @@ async function launch({ postgres, home, data, name }) {
 /** Another server could have taken the port meanwhile: the data folder must be ours. */
 async function compareDataDirectory(url, data) {
   const answer = await must('psql', ['-XAtqc', 'show data_directory', url]);
-  if (realpathSync(answer.trim()) !== realpathSync(data)) giveUp(`The PostgreSQL that answers keeps its data in ${answer.trim()}, not in ${data}.`);
+  if (realpathSync(answer.trim()) !== realpathSync(data))
+    giveUp(`The PostgreSQL that answers keeps its data in ${answer.trim()}, not in ${data}.`);
 }
 
 async function ensureDatabase(url, database) {

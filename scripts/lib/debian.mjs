@@ -19,7 +19,10 @@ function onPath(program) {
 export function findPostgres() {
   const base = '/usr/lib/postgresql';
   try {
-    const majors = readdirSync(base).filter((name) => onDisk(join(base, name, 'bin', 'postgres'))).map(Number).sort((a, b) => b - a);
+    const majors = readdirSync(base)
+      .filter((name) => onDisk(join(base, name, 'bin', 'postgres')))
+      .map(Number)
+      .sort((a, b) => b - a);
     return majors[0] === undefined ? null : { bin: join(base, String(majors[0]), 'bin'), major: majors[0] };
   } catch {
     return null;
@@ -46,7 +49,8 @@ export async function ensureDebianPackages(names) {
   const missing = names.filter((name) => !present[name]());
   if (missing.length === 0) return;
   const install = ['install', '-y', '--no-install-recommends', '-o', 'DPkg::Lock::Timeout=300', ...missing];
-  if (process.getuid?.() !== 0) giveUp(`Missing: ${missing.join(', ')}. Please run:\n  sudo apt-get update && sudo apt-get ${install.join(' ')}\nand start again.`);
+  if (process.getuid?.() !== 0)
+    giveUp(`Missing: ${missing.join(', ')}. Please run:\n  sudo apt-get update && sudo apt-get ${install.join(' ')}\nand start again.`);
   say(`Installing from Debian's packages: ${missing.join(', ')}.`);
   const env = { ...process.env, DEBIAN_FRONTEND: 'noninteractive' };
   await waiting('waiting for apt-get update', () => must('apt-get', ['update', '-q', '-o', 'DPkg::Lock::Timeout=300'], { env }));

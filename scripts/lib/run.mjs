@@ -22,7 +22,8 @@ export function run(command, args, options = {}) {
 /** Like `run`, but a code other than 0 is an error that shows what the program said. */
 export async function must(command, args, options) {
   const result = await run(command, args, options);
-  if (result.code !== 0) throw new Error(`${command} ${args.join(' ')} ended with ${result.code}:\n${(result.stderr || result.stdout).trim().slice(-3000)}`);
+  if (result.code !== 0)
+    throw new Error(`${command} ${args.join(' ')} ended with ${result.code}:\n${(result.stderr || result.stdout).trim().slice(-3000)}`);
   return result.stdout;
 }
 

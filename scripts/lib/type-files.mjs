@@ -8,5 +8,6 @@ import { expoEnvironment } from './web-build.mjs';
 export async function ensureTypeFiles() {
   const expo = join(root, 'node_modules', 'expo', 'bin', 'cli');
   await must(process.execPath, [expo, 'customize', 'tsconfig.json'], { cwd: root, env: { ...process.env, ...expoEnvironment } });
-  if (!existsSync(join(root, '.expo', 'types', 'router.d.ts'))) throw new Error('Expo wrote no .expo/types/router.d.ts: typed routes would not be checked.');
+  if (!existsSync(join(root, '.expo', 'types', 'router.d.ts')))
+    throw new Error('Expo wrote no .expo/types/router.d.ts: typed routes would not be checked.');
 }

@@ -7,9 +7,7 @@ export interface AccessSource {
   user(userId: string): Promise<{ id: string; name: string; email: string } | null>;
   membership(userId: string, labId: string): Promise<Membership | null>;
   /** Sessions within their absolute life and memberships of everybody in these labs, for the memory copy. */
-  ofLabs(
-    labIds: readonly string[],
-  ): Promise<{
+  ofLabs(labIds: readonly string[]): Promise<{
     sessions: Session[];
     users: { id: string; name: string; email: string }[];
     memberships: (Membership & { userId: string })[];

@@ -63,18 +63,16 @@ export function createRig(
       await tx.insert(rigs).values({ labId: rig.labId, name: rig.name, revision: 1, createdAt: maker.at }).returning({ id: rigs.id }),
     );
     const key = { labId: rig.labId, rigId: row.id };
-    await tx
-      .insert(rigRevisions)
-      .values({
-        ...key,
-        number: 1,
-        name: rig.name,
-        document: rig.document,
-        reason: 'first entry',
-        madeAt: maker.at,
-        madeById: maker.userId,
-        madeBy: maker.name,
-      });
+    await tx.insert(rigRevisions).values({
+      ...key,
+      number: 1,
+      name: rig.name,
+      document: rig.document,
+      reason: 'first entry',
+      madeAt: maker.at,
+      madeById: maker.userId,
+      madeBy: maker.name,
+    });
     await tx.insert(rigLinks).values({ ...key, settings: rig.link, changedAt: maker.at, changedBy: maker.name });
     await tx.insert(massSets).values({ ...key, label: rig.massSetLabel, sources: rig.document.sources, createdAt: maker.at });
     return row.id;
@@ -98,19 +96,17 @@ export function reviseRig(
       .where(and(eq(rigs.labId, rig.labId), eq(rigs.id, rig.rigId), eq(rigs.revision, rig.expectedRevision)))
       .returning({ id: rigs.id });
     if (moved.length === 0) return false;
-    await tx
-      .insert(rigRevisions)
-      .values({
-        labId: rig.labId,
-        rigId: rig.rigId,
-        number,
-        name: rig.name,
-        document: rig.document,
-        reason: rig.reason,
-        madeAt: maker.at,
-        madeById: maker.userId,
-        madeBy: maker.name,
-      });
+    await tx.insert(rigRevisions).values({
+      labId: rig.labId,
+      rigId: rig.rigId,
+      number,
+      name: rig.name,
+      document: rig.document,
+      reason: rig.reason,
+      madeAt: maker.at,
+      madeById: maker.userId,
+      madeBy: maker.name,
+    });
     return true;
   });
 }

@@ -3,7 +3,13 @@ import { idSchema, instantSchema } from './common';
 import { defineRoute } from './route';
 
 export const channelViewSchema = z.strictObject({
-  id: idSchema, rigId: idSchema, name: z.string(), quantity: z.string(), unit: z.string(), role: z.enum(['deflection', 'environment', 'turntable']), source: z.enum(['simulated', 'import', 'stream']),
+  id: idSchema,
+  rigId: idSchema,
+  name: z.string(),
+  quantity: z.string(),
+  unit: z.string(),
+  role: z.enum(['deflection', 'environment', 'turntable']),
+  source: z.enum(['simulated', 'import', 'stream']),
 });
 export type ChannelView = z.infer<typeof channelViewSchema>;
 
@@ -35,13 +41,24 @@ export const importPreviewSchema = z.strictObject({
   ambiguous: z.array(z.string()),
 });
 export const importViewSchema = z.strictObject({
-  id: idSchema, runId: idSchema, fileName: z.string(), state: z.enum(['waiting', 'received', 'stored', 'refused']), bytes: z.number().int(), sha256: z.string().nullable(), preview: importPreviewSchema.nullable(),
+  id: idSchema,
+  runId: idSchema,
+  fileName: z.string(),
+  state: z.enum(['waiting', 'received', 'stored', 'refused']),
+  bytes: z.number().int(),
+  sha256: z.string().nullable(),
+  preview: importPreviewSchema.nullable(),
 });
 export type ImportView = z.infer<typeof importViewSchema>;
 export const importCheckSchema = z.strictObject({
-  ok: z.boolean(), rows: z.number().int(), firstAt: instantSchema.nullable(), lastAt: instantSchema.nullable(), medianIntervalS: z.number().nullable(),
+  ok: z.boolean(),
+  rows: z.number().int(),
+  firstAt: instantSchema.nullable(),
+  lastAt: instantSchema.nullable(),
+  medianIntervalS: z.number().nullable(),
   /** The first 100 problems, and how many there are in all. */
-  problems: z.array(importProblemSchema), problemCount: z.number().int(),
+  problems: z.array(importProblemSchema),
+  problemCount: z.number().int(),
   /** In words: how the data lie against the run, for example `covers 100 % of the run`. */
   overlap: z.string(),
 });
@@ -49,26 +66,81 @@ export type ImportCheck = z.infer<typeof importCheckSchema>;
 
 const importPath = '/labs/:labId/imports/:importId';
 
-export const listChannels = defineRoute({ name: 'listChannels', summary: 'Channels of a rig', method: 'GET', path: '/labs/:labId/rigs/:rigId/channels', access: 'read', status: 200, response: z.strictObject({ items: z.array(channelViewSchema) }), problems: ['not-found'] });
+export const listChannels = defineRoute({
+  name: 'listChannels',
+  summary: 'Channels of a rig',
+  method: 'GET',
+  path: '/labs/:labId/rigs/:rigId/channels',
+  access: 'read',
+  status: 200,
+  response: z.strictObject({ items: z.array(channelViewSchema) }),
+  problems: ['not-found'],
+});
 export const beginImport = defineRoute({
-  name: 'beginImport', summary: 'Begin the import of a deflection file for a run', method: 'POST', path: '/labs/:labId/runs/:runId/imports', access: 'data.import', status: 201, idempotent: true,
-  body: z.strictObject({ fileName: z.string().min(1).max(255) }), response: importViewSchema, problems: ['invalid-input', 'not-found'],
+  name: 'beginImport',
+  summary: 'Begin the import of a deflection file for a run',
+  method: 'POST',
+  path: '/labs/:labId/runs/:runId/imports',
+  access: 'data.import',
+  status: 201,
+  idempotent: true,
+  body: z.strictObject({ fileName: z.string().min(1).max(255) }),
+  response: importViewSchema,
+  problems: ['invalid-input', 'not-found'],
 });
 export const putImportContent = defineRoute({
-  name: 'putImportContent', summary: 'Send the file; the answer shows its first rows and a guessed mapping', method: 'PUT', path: `${importPath}/content`, access: 'data.import', status: 200, consumes: 'text/csv',
-  response: importViewSchema, problems: ['not-found', 'too-large', 'wrong-content-type', 'unreadable-data', 'not-possible-now'],
+  name: 'putImportContent',
+  summary: 'Send the file; the answer shows its first rows and a guessed mapping',
+  method: 'PUT',
+  path: `${importPath}/content`,
+  access: 'data.import',
+  status: 200,
+  consumes: 'text/csv',
+  response: importViewSchema,
+  problems: ['not-found', 'too-large', 'wrong-content-type', 'unreadable-data', 'not-possible-now'],
 });
 export const checkImport = defineRoute({
-  name: 'checkImport', summary: 'Read the whole file with a mapping and list every problem by row; stores nothing', method: 'POST', path: `${importPath}/check`, access: 'data.import', status: 200,
-  body: z.strictObject({ mapping: importMappingSchema }), response: importCheckSchema, problems: ['invalid-input', 'not-found', 'not-possible-now'],
+  name: 'checkImport',
+  summary: 'Read the whole file with a mapping and list every problem by row; stores nothing',
+  method: 'POST',
+  path: `${importPath}/check`,
+  access: 'data.import',
+  status: 200,
+  body: z.strictObject({ mapping: importMappingSchema }),
+  response: importCheckSchema,
+  problems: ['invalid-input', 'not-found', 'not-possible-now'],
 });
 export const commitImport = defineRoute({
-  name: 'commitImport', summary: 'Store the samples, all or none', method: 'POST', path: `${importPath}/commit`, access: 'data.import', status: 200, idempotent: true,
+  name: 'commitImport',
+  summary: 'Store the samples, all or none',
+  method: 'POST',
+  path: `${importPath}/commit`,
+  access: 'data.import',
+  status: 200,
+  idempotent: true,
   body: z.strictObject({ mapping: importMappingSchema, channelName: z.string().min(1).max(80) }),
-  response: z.strictObject({ channel: channelViewSchema, stored: z.number().int(), known: z.number().int() }), problems: ['invalid-input', 'not-found', 'unreadable-data', 'not-possible-now', 'already-exists'],
+  response: z.strictObject({ channel: channelViewSchema, stored: z.number().int(), known: z.number().int() }),
+  problems: ['invalid-input', 'not-found', 'unreadable-data', 'not-possible-now', 'already-exists'],
 });
 export const readSamples = defineRoute({
-  name: 'readSamples', summary: 'Samples of a channel within a run for a plot: least and greatest in each of `points` / 2 intervals', method: 'GET', path: '/labs/:labId/runs/:runId/samples', access: 'read', status: 200,
-  query: z.strictObject({ channelId: idSchema.optional(), fromUtcMs: z.coerce.number().optional(), toUtcMs: z.coerce.number().optional(), points: z.coerce.number().int().min(10).max(4000).default(2000) }),
-  response: z.strictObject({ channel: channelViewSchema.nullable(), channels: z.array(channelViewSchema), utcMs: z.array(z.number()), value: z.array(z.number()), total: z.number().int() }), problems: ['invalid-input', 'not-found'],
+  name: 'readSamples',
+  summary: 'Samples of a channel within a run for a plot: least and greatest in each of `points` / 2 intervals',
+  method: 'GET',
+  path: '/labs/:labId/runs/:runId/samples',
+  access: 'read',
+  status: 200,
+  query: z.strictObject({
+    channelId: idSchema.optional(),
+    fromUtcMs: z.coerce.number().optional(),
+    toUtcMs: z.coerce.number().optional(),
+    points: z.coerce.number().int().min(10).max(4000).default(2000),
+  }),
+  response: z.strictObject({
+    channel: channelViewSchema.nullable(),
+    channels: z.array(channelViewSchema),
+    utcMs: z.array(z.number()),
+    value: z.array(z.number()),
+    total: z.number().int(),
+  }),
+  problems: ['invalid-input', 'not-found'],
 });

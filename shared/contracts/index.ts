@@ -7,7 +7,10 @@ import type { RouteContract } from './route';
 import * as runs from './runs';
 import * as service from './service';
 
-const isRoute = (value: unknown): value is RouteContract => typeof value === 'object' && value !== null && 'method' in value && 'path' in value && 'access' in value;
+const isRoute = (value: unknown): value is RouteContract =>
+  typeof value === 'object' && value !== null && 'method' in value && 'path' in value && 'access' in value;
 
 /** Every route of the API, once. */
-export const routes: readonly RouteContract[] = [service, people, rigs, protocols, runs, data, evaluations].flatMap((module) => Object.values(module).filter(isRoute));
+export const routes: readonly RouteContract[] = [service, people, rigs, protocols, runs, data, evaluations].flatMap((module) =>
+  Object.values(module).filter(isRoute),
+);

@@ -25,7 +25,7 @@ export const problemCodes = {
   'cannot-evaluate': 422,
   'precondition-required': 428,
   'too-many-requests': 429,
-  'internal': 500,
+  internal: 500,
   'database-away': 503,
 } as const;
 

@@ -5,7 +5,11 @@ import { defineRoute } from './route';
 
 export const linkSettingsSchema = z.discriminatedUnion('kind', [
   z.strictObject({ kind: z.literal('simulated') }),
-  z.strictObject({ kind: z.literal('serial'), path: z.string().min(1).max(300), baudRate: z.number().int().min(300).max(1_000_000).default(115200) }),
+  z.strictObject({
+    kind: z.literal('serial'),
+    path: z.string().min(1).max(300),
+    baudRate: z.number().int().min(300).max(1_000_000).default(115200),
+  }),
 ]);
 export type LinkSettings = z.infer<typeof linkSettingsSchema>;
 
@@ -26,14 +30,25 @@ export const rigLiveSchema = z.strictObject({
 export type RigLive = z.infer<typeof rigLiveSchema>;
 
 /** Somebody on site answers for the rig until `until`. */
-export const armViewSchema = z.strictObject({ id: idSchema, name: z.string(), from: instantSchema, until: instantSchema, note: z.string() });
+export const armViewSchema = z.strictObject({
+  id: idSchema,
+  name: z.string(),
+  from: instantSchema,
+  until: instantSchema,
+  note: z.string(),
+});
 export type ArmView = z.infer<typeof armViewSchema>;
 
 export const massSetViewSchema = z.strictObject({ id: idSchema, label: z.string(), sources: rigDocumentSchema.shape.sources });
 export type MassSetView = z.infer<typeof massSetViewSchema>;
 
 export const rigSummarySchema = z.strictObject({
-  id: idSchema, name: z.string(), revision: z.number().int(), link: linkSettingsSchema, live: rigLiveSchema, arm: armViewSchema.nullable(),
+  id: idSchema,
+  name: z.string(),
+  revision: z.number().int(),
+  link: linkSettingsSchema,
+  live: rigLiveSchema,
+  arm: armViewSchema.nullable(),
   activeRun: z.strictObject({ id: idSchema, state: z.string(), protocolName: z.string() }).nullable(),
 });
 export const rigViewSchema = rigSummarySchema.extend({ document: rigDocumentSchema, massSets: z.array(massSetViewSchema) });
@@ -42,41 +57,149 @@ export type RigView = z.infer<typeof rigViewSchema>;
 
 const rigPath = '/labs/:labId/rigs/:rigId';
 
-export const listRigs = defineRoute({ name: 'listRigs', summary: 'Rigs of the lab with their live state', method: 'GET', path: '/labs/:labId/rigs', access: 'read', status: 200, response: z.strictObject({ items: z.array(rigSummarySchema) }), problems: ['not-found'] });
-export const createRig = defineRoute({
-  name: 'createRig', summary: 'Add a rig', method: 'POST', path: '/labs/:labId/rigs', access: 'rig.edit', status: 201, idempotent: true,
-  body: z.strictObject({ name: z.string().min(1).max(120), document: rigDocumentSchema, link: linkSettingsSchema }), response: rigViewSchema, problems: ['invalid-input', 'not-yet'],
+export const listRigs = defineRoute({
+  name: 'listRigs',
+  summary: 'Rigs of the lab with their live state',
+  method: 'GET',
+  path: '/labs/:labId/rigs',
+  access: 'read',
+  status: 200,
+  response: z.strictObject({ items: z.array(rigSummarySchema) }),
+  problems: ['not-found'],
 });
-export const getRig = defineRoute({ name: 'getRig', summary: 'One rig', method: 'GET', path: rigPath, access: 'read', status: 200, etag: 'reply', response: rigViewSchema, problems: ['not-found'] });
+export const createRig = defineRoute({
+  name: 'createRig',
+  summary: 'Add a rig',
+  method: 'POST',
+  path: '/labs/:labId/rigs',
+  access: 'rig.edit',
+  status: 201,
+  idempotent: true,
+  body: z.strictObject({ name: z.string().min(1).max(120), document: rigDocumentSchema, link: linkSettingsSchema }),
+  response: rigViewSchema,
+  problems: ['invalid-input', 'not-yet'],
+});
+export const getRig = defineRoute({
+  name: 'getRig',
+  summary: 'One rig',
+  method: 'GET',
+  path: rigPath,
+  access: 'read',
+  status: 200,
+  etag: 'reply',
+  response: rigViewSchema,
+  problems: ['not-found'],
+});
 export const reviseRig = defineRoute({
-  name: 'reviseRig', summary: 'Make a new revision of the rig; earlier ones stay', method: 'PUT', path: `${rigPath}/document`, access: 'rig.edit', status: 200, etag: 'required',
-  body: z.strictObject({ name: z.string().min(1).max(120), document: rigDocumentSchema, reason: z.string().min(1).max(500) }), response: rigViewSchema,
+  name: 'reviseRig',
+  summary: 'Make a new revision of the rig; earlier ones stay',
+  method: 'PUT',
+  path: `${rigPath}/document`,
+  access: 'rig.edit',
+  status: 200,
+  etag: 'required',
+  body: z.strictObject({ name: z.string().min(1).max(120), document: rigDocumentSchema, reason: z.string().min(1).max(500) }),
+  response: rigViewSchema,
   problems: ['invalid-input', 'not-found', 'edited-meanwhile', 'precondition-required', 'rig-busy'],
 });
-export const rigRevisionSchema = z.strictObject({ number: z.number().int(), at: instantSchema, by: z.string(), reason: z.string(), document: rigDocumentSchema });
-export const listRigRevisions = defineRoute({ name: 'listRigRevisions', summary: 'All revisions of the rig, newest first', method: 'GET', path: `${rigPath}/revisions`, access: 'read', status: 200, response: z.strictObject({ items: z.array(rigRevisionSchema) }), problems: ['not-found'] });
+export const rigRevisionSchema = z.strictObject({
+  number: z.number().int(),
+  at: instantSchema,
+  by: z.string(),
+  reason: z.string(),
+  document: rigDocumentSchema,
+});
+export const listRigRevisions = defineRoute({
+  name: 'listRigRevisions',
+  summary: 'All revisions of the rig, newest first',
+  method: 'GET',
+  path: `${rigPath}/revisions`,
+  access: 'read',
+  status: 200,
+  response: z.strictObject({ items: z.array(rigRevisionSchema) }),
+  problems: ['not-found'],
+});
 export const changeLink = defineRoute({
-  name: 'changeLink', summary: 'Choose the line to the controller', method: 'PUT', path: `${rigPath}/link`, access: 'rig.edit', status: 200, body: linkSettingsSchema, response: rigViewSchema,
+  name: 'changeLink',
+  summary: 'Choose the line to the controller',
+  method: 'PUT',
+  path: `${rigPath}/link`,
+  access: 'rig.edit',
+  status: 200,
+  body: linkSettingsSchema,
+  response: rigViewSchema,
   problems: ['invalid-input', 'not-found', 'rig-busy', 'not-yet'],
 });
 export const tryLink = defineRoute({
-  name: 'tryLink', summary: 'Open the line, say hello and tell what answered; nothing moves', method: 'POST', path: `${rigPath}/link/try`, access: 'rig.edit', status: 200, body: linkSettingsSchema,
-  response: z.strictObject({ ok: z.boolean(), detail: z.string(), firmware: z.string().nullable() }), problems: ['invalid-input', 'not-found', 'rig-busy', 'not-yet'],
+  name: 'tryLink',
+  summary: 'Open the line, say hello and tell what answered; nothing moves',
+  method: 'POST',
+  path: `${rigPath}/link/try`,
+  access: 'rig.edit',
+  status: 200,
+  body: linkSettingsSchema,
+  response: z.strictObject({ ok: z.boolean(), detail: z.string(), firmware: z.string().nullable() }),
+  problems: ['invalid-input', 'not-found', 'rig-busy', 'not-yet'],
 });
 export const arm = defineRoute({
-  name: 'arm', summary: 'Arm the rig: a named person on site answers for it until a time at most 72 h ahead', method: 'POST', path: `${rigPath}/arm`, access: 'rig.arm', status: 201, idempotent: true,
-  body: z.strictObject({ name: z.string().min(1).max(120), until: instantSchema, note: z.string().max(500).default(''), cautionsRead: z.literal(true) }), response: armViewSchema,
+  name: 'arm',
+  summary: 'Arm the rig: a named person on site answers for it until a time at most 72 h ahead',
+  method: 'POST',
+  path: `${rigPath}/arm`,
+  access: 'rig.arm',
+  status: 201,
+  idempotent: true,
+  body: z.strictObject({
+    name: z.string().min(1).max(120),
+    until: instantSchema,
+    note: z.string().max(500).default(''),
+    cautionsRead: z.literal(true),
+  }),
+  response: armViewSchema,
   problems: ['invalid-input', 'not-found', 'not-ready'],
 });
-export const disarm = defineRoute({ name: 'disarm', summary: 'End the arm', method: 'DELETE', path: `${rigPath}/arm`, access: 'rig.arm', status: 204, problems: ['not-found'] });
-export const addMassSet = defineRoute({
-  name: 'addMassSet', summary: 'Add a mass set', method: 'POST', path: `${rigPath}/mass-sets`, access: 'rig.edit', status: 201, idempotent: true,
-  body: z.strictObject({ label: z.string().min(1).max(120), sources: rigDocumentSchema.shape.sources }), response: massSetViewSchema, problems: ['invalid-input', 'not-found', 'already-exists'],
+export const disarm = defineRoute({
+  name: 'disarm',
+  summary: 'End the arm',
+  method: 'DELETE',
+  path: `${rigPath}/arm`,
+  access: 'rig.arm',
+  status: 204,
+  problems: ['not-found'],
 });
-export const startCheckSchema = z.strictObject({ code: z.string(), title: z.string(), state: z.enum(['pass', 'fail', 'note']), detail: z.string() });
+export const addMassSet = defineRoute({
+  name: 'addMassSet',
+  summary: 'Add a mass set',
+  method: 'POST',
+  path: `${rigPath}/mass-sets`,
+  access: 'rig.edit',
+  status: 201,
+  idempotent: true,
+  body: z.strictObject({ label: z.string().min(1).max(120), sources: rigDocumentSchema.shape.sources }),
+  response: massSetViewSchema,
+  problems: ['invalid-input', 'not-found', 'already-exists'],
+});
+export const startCheckSchema = z.strictObject({
+  code: z.string(),
+  title: z.string(),
+  state: z.enum(['pass', 'fail', 'note']),
+  detail: z.string(),
+});
 export type StartCheck = z.infer<typeof startCheckSchema>;
 export const startChecks = defineRoute({
-  name: 'startChecks', summary: 'What stands between this rig and a start of this protocol revision', method: 'GET', path: `${rigPath}/start-checks`, access: 'read', status: 200,
+  name: 'startChecks',
+  summary: 'What stands between this rig and a start of this protocol revision',
+  method: 'GET',
+  path: `${rigPath}/start-checks`,
+  access: 'read',
+  status: 200,
   query: z.strictObject({ protocolId: idSchema, revision: z.coerce.number().int().positive() }),
-  response: z.strictObject({ checks: z.array(startCheckSchema), mayStart: z.boolean(), durationS: z.number(), finishAt: instantSchema, firstMove: z.string() }), problems: ['invalid-input', 'not-found'],
+  response: z.strictObject({
+    checks: z.array(startCheckSchema),
+    mayStart: z.boolean(),
+    durationS: z.number(),
+    finishAt: instantSchema,
+    firstMove: z.string(),
+  }),
+  problems: ['invalid-input', 'not-found'],
 });

@@ -36,5 +36,9 @@ export type ResponseOf<R extends RouteContract> = R extends { response: z.ZodTyp
 export type BodyOf<R extends RouteContract> = R extends { body: z.ZodType } ? z.input<R['body']> : undefined;
 export type QueryOf<R extends RouteContract> = R extends { query: z.ZodType } ? z.input<R['query']> : undefined;
 
-type ParamNames<P extends string> = P extends `${string}:${infer Name}/${infer Rest}` ? Name | ParamNames<Rest> : P extends `${string}:${infer Name}` ? Name : never;
+type ParamNames<P extends string> = P extends `${string}:${infer Name}/${infer Rest}`
+  ? Name | ParamNames<Rest>
+  : P extends `${string}:${infer Name}`
+    ? Name
+    : never;
 export type ParamsOf<R extends RouteContract> = { [K in ParamNames<R['path']>]: string };

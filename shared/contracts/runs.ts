@@ -10,42 +10,77 @@ export type RunState = z.infer<typeof runStateSchema>;
 
 /** The three honest stages of hold and stop: sent (the phone's own), the server has it, the controller confirmed. */
 export const interventionSchema = z.strictObject({
-  kind: z.enum(['hold', 'hold-after-dwell', 'resume', 'stop']), by: z.string(),
+  kind: z.enum(['hold', 'hold-after-dwell', 'resume', 'stop']),
+  by: z.string(),
   serverAt: instantSchema,
   /** When the controller itself said that the turntable stands still; null until then. */
   confirmedAt: instantSchema.nullable(),
 });
 
 export const stepRowViewSchema = z.strictObject({
-  seq: z.number().int(), path: z.string(), kind: z.string(), label: z.string(), station: z.string(),
-  plannedStartUtcMs: z.number(), plannedEndUtcMs: z.number().nullable(), startUtcMs: z.number(), endUtcMs: z.number().nullable(),
-  uStartS: z.number(), uEndS: z.number().nullable(), angleStartDeg: z.number().nullable(), angleEndDeg: z.number().nullable(),
+  seq: z.number().int(),
+  path: z.string(),
+  kind: z.string(),
+  label: z.string(),
+  station: z.string(),
+  plannedStartUtcMs: z.number(),
+  plannedEndUtcMs: z.number().nullable(),
+  startUtcMs: z.number(),
+  endUtcMs: z.number().nullable(),
+  uStartS: z.number(),
+  uEndS: z.number().nullable(),
+  angleStartDeg: z.number().nullable(),
+  angleEndDeg: z.number().nullable(),
   outcome: z.enum(['done', 'cut short', 'skipped', 'failed', 'late']).nullable(),
-  angleSource: z.enum(['counted', 'edge-verified', 'encoder']), uAngleDeg: z.number().nullable(), good: z.boolean().nullable(),
+  angleSource: z.enum(['counted', 'edge-verified', 'encoder']),
+  uAngleDeg: z.number().nullable(),
+  good: z.boolean().nullable(),
 });
 export type StepRowView = z.infer<typeof stepRowViewSchema>;
 
-export const chainedEventSchema = z.strictObject({ seq: z.number().int(), at: z.string(), kind: z.string(), data: z.record(z.string(), z.unknown()), prev: z.string(), hash: z.string() });
+export const chainedEventSchema = z.strictObject({
+  seq: z.number().int(),
+  at: z.string(),
+  kind: z.string(),
+  data: z.record(z.string(), z.unknown()),
+  prev: z.string(),
+  hash: z.string(),
+});
 
 export const runSummarySchema = z.strictObject({
-  id: idSchema, rigId: idSchema, rigName: z.string(), protocolId: idSchema.nullable(), protocolName: z.string(), protocolRevision: z.number().int(), state: runStateSchema,
-  rehearsal: z.boolean(), operator: z.string(), createdAt: instantSchema, startedAt: instantSchema.nullable(), endedAt: instantSchema.nullable(), predictedEndAt: instantSchema.nullable(),
+  id: idSchema,
+  rigId: idSchema,
+  rigName: z.string(),
+  protocolId: idSchema.nullable(),
+  protocolName: z.string(),
+  protocolRevision: z.number().int(),
+  state: runStateSchema,
+  rehearsal: z.boolean(),
+  operator: z.string(),
+  createdAt: instantSchema,
+  startedAt: instantSchema.nullable(),
+  endedAt: instantSchema.nullable(),
+  predictedEndAt: instantSchema.nullable(),
 });
 export type RunSummary = z.infer<typeof runSummarySchema>;
 
 export const runViewSchema = runSummarySchema.extend({
-  notes: z.string(), massSetLabel: z.string(),
+  notes: z.string(),
+  massSetLabel: z.string(),
   /** Why it is held, stopped or failed, and what would help; empty while all is well. */
   reason: z.string(),
   current: stepRowViewSchema.nullable(),
   /** When the current step ends by plan; null where it ends by an event. */
   deadlineAt: instantSchema.nullable(),
-  dwellsDone: z.number().int(), dwellsPlanned: z.number().int(),
-  holdAfterDwell: z.boolean(), intervention: interventionSchema.nullable(),
+  dwellsDone: z.number().int(),
+  dwellsPlanned: z.number().int(),
+  holdAfterDwell: z.boolean(),
+  intervention: interventionSchema.nullable(),
   mayResume: z.strictObject({ ok: z.boolean(), why: z.string() }),
   /** Last sequence number of the event chain. */
   lastSeq: z.number().int(),
-  rig: rigDocumentSchema, protocol: protocolDocumentSchema,
+  rig: rigDocumentSchema,
+  protocol: protocolDocumentSchema,
   simulated: z.strictObject({ trueG: z.number(), seed: z.number(), rateHz: z.number() }).nullable(),
 });
 export type RunView = z.infer<typeof runViewSchema>;
@@ -56,9 +91,20 @@ export const liveMessageSchemas = {
   snapshot: runViewSchema,
   event: chainedEventSchema,
   step: stepRowViewSchema,
-  samples: z.strictObject({ channelId: idSchema, channel: z.string(), unit: z.string(), utcMs: z.array(z.number()), value: z.array(z.number()) }),
+  samples: z.strictObject({
+    channelId: idSchema,
+    channel: z.string(),
+    unit: z.string(),
+    utcMs: z.array(z.number()),
+    value: z.array(z.number()),
+  }),
   /** Once a second. */
-  beat: z.strictObject({ serverAt: instantSchema, link: z.enum(['closed', 'opening', 'ready', 'lost', 'refused']), lastReplyAt: instantSchema.nullable(), angleDeg: z.number().nullable() }),
+  beat: z.strictObject({
+    serverAt: instantSchema,
+    link: z.enum(['closed', 'opening', 'ready', 'lost', 'refused']),
+    lastReplyAt: instantSchema.nullable(),
+    angleDeg: z.number().nullable(),
+  }),
 } as const;
 export type LiveMessages = { [K in keyof typeof liveMessageSchemas]: z.infer<(typeof liveMessageSchemas)[K]> };
 
@@ -71,28 +117,147 @@ const command = z.strictObject({
 const accepted = z.strictObject({ runId: idSchema, serverAt: instantSchema });
 
 export const listRuns = defineRoute({
-  name: 'listRuns', summary: 'Runs and rehearsals, newest first', method: 'GET', path: labRuns, access: 'read', status: 200,
-  query: pageQuerySchema.extend({ rigId: idSchema.optional(), active: z.enum(['true']).optional() }), response: pageOf(runSummarySchema), problems: ['invalid-input', 'not-found'],
+  name: 'listRuns',
+  summary: 'Runs and rehearsals, newest first',
+  method: 'GET',
+  path: labRuns,
+  access: 'read',
+  status: 200,
+  query: pageQuerySchema.extend({ rigId: idSchema.optional(), active: z.enum(['true']).optional() }),
+  response: pageOf(runSummarySchema),
+  problems: ['invalid-input', 'not-found'],
 });
 export const startRun = defineRoute({
-  name: 'startRun', summary: 'Start an issued revision on an armed rig', method: 'POST', path: labRuns, access: 'run.start', status: 201, idempotent: true,
-  body: z.strictObject({ rigId: idSchema, protocolId: idSchema, revision: z.number().int().positive(), massSetId: idSchema, notes: z.string().max(5000).default(''), tappedAt: instantSchema.optional() }),
-  response: runSummarySchema, problems: ['invalid-input', 'not-found', 'rig-busy', 'not-armed', 'not-ready', 'protocol-refused', 'not-yet', 'not-possible-now', 'key-reused', 'still-running'],
+  name: 'startRun',
+  summary: 'Start an issued revision on an armed rig',
+  method: 'POST',
+  path: labRuns,
+  access: 'run.start',
+  status: 201,
+  idempotent: true,
+  body: z.strictObject({
+    rigId: idSchema,
+    protocolId: idSchema,
+    revision: z.number().int().positive(),
+    massSetId: idSchema,
+    notes: z.string().max(5000).default(''),
+    tappedAt: instantSchema.optional(),
+  }),
+  response: runSummarySchema,
+  problems: [
+    'invalid-input',
+    'not-found',
+    'rig-busy',
+    'not-armed',
+    'not-ready',
+    'protocol-refused',
+    'not-yet',
+    'not-possible-now',
+    'key-reused',
+    'still-running',
+  ],
 });
 export const rehearse = defineRoute({
-  name: 'rehearse', summary: 'Run the draft or a revision on the simulated rig in fast time', method: 'POST', path: '/labs/:labId/rehearsals', access: 'protocol.write', status: 202, idempotent: true,
-  body: z.strictObject({ rigId: idSchema, protocolId: idSchema, revision: z.number().int().positive().optional(), seed: z.number().int().min(1).max(2_147_483_646).default(1) }),
-  response: runSummarySchema, problems: ['invalid-input', 'not-found', 'protocol-refused', 'not-yet'],
+  name: 'rehearse',
+  summary: 'Run the draft or a revision on the simulated rig in fast time',
+  method: 'POST',
+  path: '/labs/:labId/rehearsals',
+  access: 'protocol.write',
+  status: 202,
+  idempotent: true,
+  body: z.strictObject({
+    rigId: idSchema,
+    protocolId: idSchema,
+    revision: z.number().int().positive().optional(),
+    seed: z.number().int().min(1).max(2_147_483_646).default(1),
+  }),
+  response: runSummarySchema,
+  problems: ['invalid-input', 'not-found', 'protocol-refused', 'not-yet'],
 });
-export const getRun = defineRoute({ name: 'getRun', summary: 'One run', method: 'GET', path, access: 'read', status: 200, response: runViewSchema, problems: ['not-found'] });
-const intervention = <L extends string>(leaf: L, route: { name: string; summary: string; access: 'run.hold' | 'run.stop' | 'run.resume' }) =>
-  defineRoute({ ...route, method: 'POST', path: `${path}/${leaf}` as const, status: 202, idempotent: true, body: command, response: accepted, problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'key-reused', 'still-running'] });
-export const holdRun = intervention('hold', { name: 'holdRun', summary: 'Hold: decelerate, keep torque; the run can be resumed', access: 'run.hold' });
-export const holdAfterDwell = intervention('hold-after-dwell', { name: 'holdAfterDwell', summary: 'Hold when the present dwell has ended', access: 'run.hold' });
+export const getRun = defineRoute({
+  name: 'getRun',
+  summary: 'One run',
+  method: 'GET',
+  path,
+  access: 'read',
+  status: 200,
+  response: runViewSchema,
+  problems: ['not-found'],
+});
+const intervention = <L extends string>(
+  leaf: L,
+  route: { name: string; summary: string; access: 'run.hold' | 'run.stop' | 'run.resume' },
+) =>
+  defineRoute({
+    ...route,
+    method: 'POST',
+    path: `${path}/${leaf}` as const,
+    status: 202,
+    idempotent: true,
+    body: command,
+    response: accepted,
+    problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'key-reused', 'still-running'],
+  });
+export const holdRun = intervention('hold', {
+  name: 'holdRun',
+  summary: 'Hold: decelerate, keep torque; the run can be resumed',
+  access: 'run.hold',
+});
+export const holdAfterDwell = intervention('hold-after-dwell', {
+  name: 'holdAfterDwell',
+  summary: 'Hold when the present dwell has ended',
+  access: 'run.hold',
+});
 export const resumeRun = intervention('resume', { name: 'resumeRun', summary: 'Resume a held run', access: 'run.resume' });
 export const stopRun = intervention('stop', { name: 'stopRun', summary: 'Stop: decelerate and end the run', access: 'run.stop' });
-export const liveRun = defineRoute({ name: 'liveRun', summary: 'Live stream of a run; continues after Last-Event-ID', method: 'GET', path: `${path}/live`, access: 'read', status: 200, produces: 'text/event-stream', problems: ['not-found'] });
-export const listSteps = defineRoute({ name: 'listSteps', summary: 'The step log', method: 'GET', path: `${path}/steps`, access: 'read', status: 200, response: z.strictObject({ items: z.array(stepRowViewSchema) }), problems: ['not-found'] });
-export const stepsCsv = defineRoute({ name: 'stepsCsv', summary: 'The step log as CSV', method: 'GET', path: `${path}/steps.csv`, access: 'read', status: 200, produces: 'text/csv', problems: ['not-found'] });
-export const listEvents = defineRoute({ name: 'listEvents', summary: 'The event chain', method: 'GET', path: `${path}/events`, access: 'read', status: 200, query: pageQuerySchema, response: pageOf(chainedEventSchema), problems: ['invalid-input', 'not-found'] });
-export const downloadArchive = defineRoute({ name: 'downloadArchive', summary: 'The run archive (ZIP)', method: 'GET', path: `${path}/archive.zip`, access: 'read', status: 200, produces: 'application/zip', problems: ['not-found', 'not-possible-now'] });
+export const liveRun = defineRoute({
+  name: 'liveRun',
+  summary: 'Live stream of a run; continues after Last-Event-ID',
+  method: 'GET',
+  path: `${path}/live`,
+  access: 'read',
+  status: 200,
+  produces: 'text/event-stream',
+  problems: ['not-found'],
+});
+export const listSteps = defineRoute({
+  name: 'listSteps',
+  summary: 'The step log',
+  method: 'GET',
+  path: `${path}/steps`,
+  access: 'read',
+  status: 200,
+  response: z.strictObject({ items: z.array(stepRowViewSchema) }),
+  problems: ['not-found'],
+});
+export const stepsCsv = defineRoute({
+  name: 'stepsCsv',
+  summary: 'The step log as CSV',
+  method: 'GET',
+  path: `${path}/steps.csv`,
+  access: 'read',
+  status: 200,
+  produces: 'text/csv',
+  problems: ['not-found'],
+});
+export const listEvents = defineRoute({
+  name: 'listEvents',
+  summary: 'The event chain',
+  method: 'GET',
+  path: `${path}/events`,
+  access: 'read',
+  status: 200,
+  query: pageQuerySchema,
+  response: pageOf(chainedEventSchema),
+  problems: ['invalid-input', 'not-found'],
+});
+export const downloadArchive = defineRoute({
+  name: 'downloadArchive',
+  summary: 'The run archive (ZIP)',
+  method: 'GET',
+  path: `${path}/archive.zip`,
+  access: 'read',
+  status: 200,
+  produces: 'application/zip',
+  problems: ['not-found', 'not-possible-now'],
+});

@@ -7,14 +7,19 @@ const ownPath = 'tests/house/house-rules.test.ts';
 const lines = (path: string) => text(path).split('\n').length - 1;
 
 function keepsRatchet(found: string[], allowed: string[]) {
-  expect({ new: found.filter((path) => !allowed.includes(path)), cured: allowed.filter((path) => !found.includes(path)) }).toEqual({ new: [], cured: [] });
+  expect({ new: found.filter((path) => !allowed.includes(path)), cured: allowed.filter((path) => !found.includes(path)) }).toEqual({
+    new: [],
+    cured: [],
+  });
 }
 
 test('the top level holds what the architecture names, and nothing else', () => {
   const allowed = new Set(
-    ('app server firmware-protocol db shared assets tests components scripts docs public .ci drizzle.config.ts tailwind.config.js package.json package-lock.json ' +
+    (
+      'app server firmware-protocol db shared assets tests components scripts docs public .ci drizzle.config.ts tailwind.config.js package.json package-lock.json ' +
       'tsconfig.json README.md DEVELOPERS.md LICENSE CHANGELOG.md app.json babel.config.js metro.config.js jest.config.js eslint.config.js knip.json global.css ' +
-      '.gitignore .npmrc .prettierrc.json .prettierignore').split(' '),
+      '.gitignore .npmrc .prettierrc.json .prettierignore'
+    ).split(' '),
   );
   const top = new Set(trackedFiles().map((path) => path.split('/')[0] as string));
   expect([...top].filter((name) => !allowed.has(name))).toEqual([]);
@@ -31,7 +36,11 @@ test('routes of the application are at most 40 lines and hold no logic of their 
 
 test('file names are kebab-case', () => {
   const routeName = /^app\//;
-  expect(codeFiles().filter((path) => !routeName.test(path) && !/^[a-z0-9]+(-[a-z0-9]+)*(\.[a-z0-9-]+)*\.tsx?$/.test(path.split('/').at(-1) as string))).toEqual([]);
+  expect(
+    codeFiles().filter(
+      (path) => !routeName.test(path) && !/^[a-z0-9]+(-[a-z0-9]+)*(\.[a-z0-9-]+)*\.tsx?$/.test(path.split('/').at(-1) as string),
+    ),
+  ).toEqual([]);
 });
 
 test('nothing imports the tests', () => {
@@ -55,7 +64,9 @@ test('skipped tests give their reason beside them', () => {
 test('the lock file carries no addresses and package.json no floating versions', () => {
   expect(text('package-lock.json')).not.toMatch(/"resolved":/);
   const manifest = JSON.parse(text('package.json')) as Record<'dependencies' | 'devDependencies', Record<string, string>>;
-  const floating = Object.entries({ ...manifest.dependencies, ...manifest.devDependencies }).filter(([, version]) => !/^\d+\.\d+\.\d+$/.test(version));
+  const floating = Object.entries({ ...manifest.dependencies, ...manifest.devDependencies }).filter(
+    ([, version]) => !/^\d+\.\d+\.\d+$/.test(version),
+  );
   expect(floating).toEqual([]);
 });
 

@@ -13,5 +13,6 @@ export function trackedFiles(): string[] {
 export const text = (path: string) => readFileSync(join(root, path), 'utf8');
 
 const codeFolders = /^(app|components|server|shared|firmware-protocol|db|tests)\//;
-export const codeFiles = () => trackedFiles().filter((path) => codeFolders.test(path) && /\.(ts|tsx)$/.test(path) && !path.startsWith('db/migrations/'));
+export const codeFiles = () =>
+  trackedFiles().filter((path) => codeFolders.test(path) && /\.(ts|tsx)$/.test(path) && !path.startsWith('db/migrations/'));
 export const productFiles = () => codeFiles().filter((path) => !path.startsWith('tests/'));

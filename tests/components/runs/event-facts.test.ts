@@ -1,7 +1,9 @@
 import { eventFacts } from '@/components/runs/event-facts';
 
 test('a link that came back shows its gap rounded, with the unit', () => {
-  expect(eventFacts({ bootId: '0E9F6701', firmware: 'simulated', gapS: 1.829692653 })).toBe('boot id 0E9F6701 · firmware simulated · gap 1.8 s');
+  expect(eventFacts({ bootId: '0E9F6701', firmware: 'simulated', gapS: 1.829692653 })).toBe(
+    'boot id 0E9F6701 · firmware simulated · gap 1.8 s',
+  );
 });
 
 test('angles carry their unit, and what the row says already is not repeated', () => {

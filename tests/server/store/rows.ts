@@ -36,19 +36,17 @@ export async function makeMember(db: Database, labId: string, role: Role): Promi
 export async function makeRig(db: Database, labId: string): Promise<string> {
   const user = await makeUser(db);
   const rig = one(await db.insert(rigs).values({ labId, name: 'North bench', revision: 1, createdAt: eveningUtcMs }).returning());
-  await db
-    .insert(rigRevisions)
-    .values({
-      labId,
-      rigId: rig.id,
-      number: 1,
-      name: rig.name,
-      document: demoRigWide,
-      reason: 'first',
-      madeAt: eveningUtcMs,
-      madeById: user.id,
-      madeBy: user.name,
-    });
+  await db.insert(rigRevisions).values({
+    labId,
+    rigId: rig.id,
+    number: 1,
+    name: rig.name,
+    document: demoRigWide,
+    reason: 'first',
+    madeAt: eveningUtcMs,
+    madeById: user.id,
+    madeBy: user.name,
+  });
   return rig.id;
 }
 
