@@ -23,9 +23,18 @@ export const archiveLimits: ArchiveLimits = { files: 20_000, bytes: 2_000_000_00
  */
 export function readArchiveFiles(path: string, limits: ArchiveLimits = archiveLimits): Map<string, Uint8Array> {
   if (!existsSync(path)) throw new UnusableArchive({ file: null }, `there is no file or folder ${path}`);
-  if (statSync(path).isDirectory()) return readFolder(path, limits);
-  return readZip(readFileSync(path), limits);
+  try {
+    const about = statSync(path);
+    if (about.isDirectory()) return readFolder(path, limits);
+    if (about.size > limits.bytes) throw new UnusableArchive({ file: null }, `${path} holds more than ${limits.bytes} bytes`);
+    return readZip(readFileSync(path), limits);
+  } catch (error) {
+    if (!isSystemError(error)) throw error;
+    throw new UnusableArchive({ file: null }, `${path} cannot be read: ${error.message}`);
+  }
 }
+
+const isSystemError = (error: unknown): error is NodeJS.ErrnoException => typeof error === 'object' && error !== null && 'syscall' in error;
 
 /**
  * Unpacks a ZIP. Paths that are absolute or lead out of the archive are refused, and so is a ZIP whose content would

@@ -1,4 +1,4 @@
-import { mkdtempSync, readdirSync, symlinkSync, writeFileSync } from 'node:fs';
+import { mkdtempSync, readdirSync, symlinkSync, truncateSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { zipSync } from 'fflate';
@@ -39,6 +39,18 @@ describe('an archive on disk', () => {
   test('that is not there, or is no ZIP, is refused in words', () => {
     expect(() => readArchiveFiles('/nowhere/run.zip')).toThrow('there is no file or folder /nowhere/run.zip');
     expect(() => readZip(bytes('not a zip at all'))).toThrow('not a readable ZIP');
+  });
+
+  test('that the system does not let be read is refused in words', () => {
+    // Nothing is mapped at the first address of a process, so reading there is an error, also for root.
+    expect(() => readArchiveFiles('/proc/self/mem')).toThrow(/^\/proc\/self\/mem cannot be read: EIO/);
+  });
+
+  test('that is larger than can be held is refused before it is read', () => {
+    const path = join(folder(), 'night.zip');
+    writeFileSync(path, '');
+    truncateSync(path, archiveLimits.bytes + 1);
+    expect(() => readArchiveFiles(path)).toThrow(`${path} holds more than ${archiveLimits.bytes} bytes`);
   });
 });
 
