@@ -35,7 +35,10 @@ export async function ensureWebBuild() {
   mkdirSync(state, { recursive: true });
   const expo = join(root, 'node_modules', 'expo', 'bin', 'cli');
   await waiting('waiting for the web build', () =>
-    must(process.execPath, [expo, 'export', '--platform', 'web', '--output-dir', fresh], { cwd: root, env: { ...process.env, ...expoEnvironment } }),
+    must(process.execPath, [expo, 'export', '--platform', 'web', '--output-dir', fresh], {
+      cwd: root,
+      env: { ...process.env, ...expoEnvironment },
+    }),
   );
   await precompress(fresh);
   rmSync(join(root, 'dist'), { recursive: true, force: true });
