@@ -1,0 +1,243 @@
+import { AxeBuilder } from '@axe-core/playwright';
+import { demoIds } from '@/db/demo/seed';
+import { sizes, type Size } from '../support/browser';
+import { Hand, until } from './support/hand';
+import { labOfThisFile } from './support/lab';
+import { finishedNight, issued, read, shortNight, started } from './support/night';
+
+/** Every screen by axe in the three themes, targets a thumb can meet, and pages that fit the narrowest phone. */
+
+jest.setTimeout(240_000);
+const lab = labOfThisFile();
+const themes = ['dark', 'light', 'red'] as const;
+
+interface Place {
+  name: string;
+  path: string;
+  arrives: string;
+  /** What to do there before looking. */
+  first?: (hand: Hand) => Promise<void>;
+}
+
+let finishedId: string;
+let runningId: string;
+beforeAll(async () => {
+  finishedId = await finishedNight(lab(), 2);
+  const evaluations = `/labs/${demoIds.lab}/runs/${finishedId}/evaluations`;
+  await lab().server.as('analyst', 'POST', evaluations).send({}).expect(202);
+  await until(async () => (await lab().server.as('viewer', 'GET', evaluations)).body.items[0]?.state === 'done', 'the evaluation');
+  runningId = await started(lab(), await issued(lab(), shortNight('Going on', 12)));
+  await lab().pass(60);
+}, 120_000);
+
+const opened = (testId: string, sheet: string) => async (hand: Hand) => {
+  await hand.taps(testId);
+  await hand.at(sheet).waitFor();
+};
+
+const publicPlaces: Place[] = [
+  { name: 'sign-in', path: '/sign-in', arrives: 'sign-in' },
+  { name: 'forgotten-password', path: '/forgotten-password', arrives: '' },
+  { name: 'reset-password', path: '/reset-password?token=none', arrives: '' },
+  { name: 'invitation', path: '/invitations/none', arrives: '' },
+];
+
+function places(): Place[] {
+  const rig = `/rigs/${demoIds.rig}`;
+  const protocol = `/protocols/${demoIds.overnightProtocol}`;
+  return [
+    { name: 'rigs', path: '/rigs', arrives: 'rigs-screen' },
+    { name: 'rig', path: rig, arrives: 'rig-screen' },
+    { name: 'rig-revisions', path: `${rig}/revisions`, arrives: '' },
+    { name: 'link', path: `${rig}/link`, arrives: 'link-screen', first: (hand) => hand.tapsOn('Serial line', 'radio') },
+    { name: 'start', path: `${rig}/start`, arrives: 'start-screen', first: async (hand) => void (await hand.reads('start-checks')) },
+    { name: 'protocols', path: '/protocols', arrives: 'protocols-screen' },
+    { name: 'new-protocol', path: '/protocols/new', arrives: 'new-protocol-screen' },
+    { name: 'editor', path: protocol, arrives: 'editor', first: (hand) => hand.taps('step-2') },
+    { name: 'add-step', path: protocol, arrives: 'editor', first: opened('add-step', 'add-step-sheet') },
+    { name: 'issue', path: protocol, arrives: 'editor', first: opened('issue', 'issue-sheet') },
+    { name: 'rehearse', path: protocol, arrives: 'editor', first: opened('rehearse', 'rehearse-sheet') },
+    { name: 'more', path: protocol, arrives: 'editor', first: opened('open-more', 'more-sheet') },
+    { name: 'revisions', path: `/protocols/${demoIds.shortProtocol}/revisions`, arrives: 'protocol-revisions' },
+    { name: 'runs', path: '/runs', arrives: 'runs-screen', first: async (hand) => void (await hand.reads('run-row')) },
+    { name: 'run', path: `/runs/${runningId}`, arrives: 'run-screen', first: async (hand) => void (await hand.reads('link-chip', 'live')) },
+    { name: 'result', path: `/runs/${finishedId}`, arrives: 'result-screen', first: async (hand) => void (await hand.reads('g-panel')) },
+    { name: 'step-log', path: `/runs/${finishedId}/log`, arrives: 'step-log', first: opened('events-3', 'chain-head') },
+    {
+      name: 'data',
+      path: `/runs/${finishedId}/data`,
+      arrives: 'data-screen',
+      first: async (hand) => void (await hand.reads('channel-plot', 'samples')),
+    },
+    {
+      name: 'import',
+      path: `/runs/${finishedId}/import`,
+      arrives: 'import-screen',
+      first: async (hand) => void (await hand.at('file-drop').waitFor()),
+    },
+    {
+      name: 'evaluation',
+      path: `/runs/${finishedId}/evaluation`,
+      arrives: 'evaluation-screen',
+      first: (hand) => hand.taps('budget-table-toggle'),
+    },
+    { name: 'lab', path: '/lab', arrives: 'lab-screen' },
+  ];
+}
+
+async function visit(hand: Hand, { path, arrives, first }: Place): Promise<void> {
+  await hand.page.goto(path);
+  await (arrives === '' ? hand.page.getByRole('heading', { level: 1 }) : hand.at(arrives)).first().waitFor();
+  await first?.(hand);
+}
+
+/** Serious and critical findings, each with where. In a theme only colours are new. */
+async function findings(hand: Hand, theme: (typeof themes)[number]): Promise<string[]> {
+  await hand.page.evaluate((name) => {
+    const page = document.documentElement;
+    page.className = page.className.replace(/theme-\w+/g, '');
+    page.classList.add(`theme-${name}`);
+  }, theme);
+  const axe = new AxeBuilder({ page: hand.page }).setLegacyMode(true).options({ resultTypes: ['violations'] });
+  // What lies under a sheet cannot be reached, and is looked at on its own.
+  if (await hand.page.locator('dialog').first().isVisible()) axe.include('dialog');
+  const { violations } = await (theme === 'dark' ? axe : axe.withRules(['color-contrast'])).analyze();
+  return violations
+    .filter(({ impact }) => impact === 'serious' || impact === 'critical')
+    .flatMap(({ id, nodes }) =>
+      nodes.map((node) => `${theme}: ${id} at ${node.target.join(' ')}: ${(node.failureSummary ?? '').split('\n').slice(1, 3).join(' ')}`),
+    );
+}
+
+describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
+  let hand: Hand;
+  beforeAll(async () => {
+    hand = new Hand(await lab().open(size));
+  });
+  afterAll(async () => {
+    expect(hand.browser.errors).toEqual([]);
+    await lab().close(hand.browser);
+  });
+
+  test('axe finds nothing serious on any screen in any theme', async () => {
+    const found: Record<string, string[]> = {};
+    for (const place of [...publicPlaces, ...places()]) {
+      if (place.name === 'rigs') await lab().enter(hand.browser, 'owner');
+      await visit(hand, place);
+      const all: string[] = [];
+      for (const theme of themes) all.push(...(await findings(hand, theme)));
+      if (all.length > 0) found[place.name] = all;
+    }
+    expect(found).toEqual({});
+  });
+
+  test('a theme is chosen with one tap and stays on this device', async () => {
+    await lab().enter(hand.browser, 'owner');
+    for (const theme of ['red', 'light', 'dark'] as const) {
+      await hand.goes('/lab', 'lab-screen');
+      await hand.taps(`theme-${theme}`);
+      await hand.goes(`/runs/${runningId}`, 'run-screen');
+      expect(await hand.page.evaluate(() => document.documentElement.className)).toContain(`theme-${theme}`);
+      await hand.reads('link-chip', 'live');
+      await hand.shoots(`run-${theme}`);
+    }
+  });
+
+  test('on a run every target is 48 px or more; hold and stop are 64 px high and keep 16 px from each other', async () => {
+    await lab().enter(hand.browser, 'operator');
+    await hand.goes(`/runs/${runningId}`, 'run-screen');
+    await hand.reads('link-chip', 'live');
+    expect(await tooSmall(hand)).toEqual([]);
+    const [hold, stop, bar] = await Promise.all(['hold', 'stop', 'control-bar'].map((testId) => hand.at(testId).boundingBox()));
+    if (!hold || !stop || !bar) throw new Error('hold, stop and their bar are on the page');
+    expect(Math.min(hold.height, stop.height)).toBeGreaterThanOrEqual(64);
+    expect(stop.width).toBeGreaterThanOrEqual(bar.width / 2);
+    expect(stop.x - (hold.x + hold.width)).toBeGreaterThanOrEqual(16);
+    // Stop stays in sight wherever the page is scrolled to.
+    expect(stop.y + stop.height).toBeLessThanOrEqual(sizes[size].height);
+    await hand.goes(`/rigs/${demoIds.rig}/start`, 'start-screen');
+    await hand.reads('start-checks');
+    expect(await tooSmall(hand)).toEqual([]);
+  });
+
+  test('a held run, too', async () => {
+    await lab().server.as('operator', 'POST', `/labs/${demoIds.lab}/runs/${runningId}/hold`).send({}).expect(202);
+    await until(async () => (await read(lab(), runningId)).state === 'held', 'the run to be held');
+    await hand.goes(`/runs/${runningId}`, 'run-screen');
+    await hand.at('resume').waitFor();
+    expect([...(await findings(hand, 'dark')), ...(await tooSmall(hand))]).toEqual([]);
+    await hand.taps('resume');
+    await hand.at('resume-sheet').waitFor();
+    expect([...(await findings(hand, 'dark')), ...(await tooSmall(hand))]).toEqual([]);
+    await hand.keeps('resume-confirm');
+    await hand.at('resume-sheet').waitFor({ state: 'detached' });
+  });
+});
+
+test('axe sees what is wrong: words that can hardly be read, and a picture without a name', async () => {
+  const hand = new Hand(await lab().open('phone'));
+  await visit(hand, publicPlaces[0] as Place);
+  await hand.page.evaluate(() => {
+    const faint = document.createElement('p');
+    faint.textContent = 'faint';
+    // By the object model: the content policy takes no style out of markup.
+    Object.assign(faint.style, { color: '#333', background: '#222' });
+    const nameless = document.createElement('div');
+    nameless.setAttribute('role', 'img');
+    document.querySelector('main, [role=main]')?.append(faint, nameless);
+  });
+  const found = [...(await findings(hand, 'dark')), ...(await findings(hand, 'red'))].map((finding) => finding.split(' at ')[0]);
+  expect(found).toEqual(['dark: color-contrast', 'dark: role-img-alt', 'red: color-contrast']);
+  await lab().close(hand.browser);
+});
+
+test('at 320 px nothing leads sideways', async () => {
+  const hand = new Hand(await lab().open('phone', 'owner'));
+  await hand.page.setViewportSize({ width: 320, height: 568 });
+  const found: Record<string, string[]> = {};
+  for (const place of places()) {
+    await visit(hand, place);
+    const out = await sideways(hand);
+    if (out.length > 0) found[place.name] = out;
+    if (['run', 'editor', 'evaluation', 'start', 'rig'].includes(place.name)) await hand.shoots(`narrow-${place.name}`);
+  }
+  expect(found).toEqual({});
+  await lab().close(hand.browser);
+});
+
+/** Targets below 48 × 48 px that are on the page, each as what it is. */
+function tooSmall(hand: Hand): Promise<string[]> {
+  return hand.page.evaluate(() => {
+    const targets =
+      'a[href], button, input:not([type=file]), select, textarea, [role=button], [role=link], [role=switch], [role=checkbox], [role=radio]';
+    return [...document.querySelectorAll<HTMLElement>(targets)].flatMap((element) => {
+      const { width, height } = element.getBoundingClientRect();
+      if (width === 0 || height === 0 || (width >= 47.5 && height >= 47.5)) return [];
+      return [
+        `${element.getAttribute('aria-label') ?? element.textContent ?? element.tagName}: ${width.toFixed(0)} × ${height.toFixed(0)}`,
+      ];
+    });
+  });
+}
+
+/** What reaches over the right edge and can be reached by scrolling sideways only, but for tables and previews that scroll in themselves. */
+function sideways(hand: Hand): Promise<string[]> {
+  return hand.page.evaluate(() => {
+    const width = document.documentElement.clientWidth;
+    const scrolls = (element: Element | null): boolean => {
+      if (element === null) return false;
+      const { overflowX } = getComputedStyle(element);
+      const own = (overflowX === 'auto' || overflowX === 'scroll') && element.getAttribute('role') === 'region';
+      return own || scrolls(element.parentElement);
+    };
+    return [...document.querySelectorAll<HTMLElement>('body *')]
+      .filter(
+        (element) =>
+          element.getBoundingClientRect().right > width + 1 &&
+          element.closest('.sr-only, svg, [aria-hidden=true]') === null &&
+          !scrolls(element),
+      )
+      .map((element) => `${element.tagName} ${element.getAttribute('data-testid') ?? ''} ${(element.textContent ?? '').slice(0, 40)}`)
+      .slice(0, 5);
+  });
+}

@@ -1,0 +1,122 @@
+import { randomUUID } from 'node:crypto';
+import { demoIds } from '@/db/demo/seed';
+import type { ChainedEvent } from '@/shared/archive/run-records';
+import type { StepRowView } from '@/shared/contracts/runs';
+import type { ProtocolDocument } from '@/shared/protocol/document';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import { benchRig } from '../contract/link/bench';
+import { ControllerProcess } from '../contract/link/controller-process';
+import { Hand, until } from './support/hand';
+import { RealServer } from './support/real-server';
+
+/**
+ * In real time: a run that a browser starts drives a controller process through the real serial port class on a
+ * pseudo-terminal. The line is cut in the middle of a dwell and comes back; the run goes on, and the log shows the gap.
+ */
+
+jest.setTimeout(120_000);
+let server: RealServer;
+let controller: ControllerProcess;
+let hand: Hand;
+
+const document: ProtocolDocument = {
+  formatVersion: 1,
+  name: 'Over the serial line',
+  onInterruption: 'resume',
+  steps: [
+    { kind: 'home' },
+    { kind: 'swing', to: 'near' },
+    { kind: 'dwell', for_s: 2 },
+    { kind: 'swing', to: 'far' },
+    { kind: 'dwell', for_s: 12, label: 'cut here' },
+    { kind: 'swing', to: 'near' },
+    { kind: 'dwell', for_s: 2 },
+  ],
+};
+
+beforeAll(async () => {
+  controller = new ControllerProcess(['--homed', '--warned']);
+  await controller.start();
+  server = await RealServer.start();
+  hand = new Hand(await server.open('phone', 'keeper'));
+}, 60_000);
+afterAll(async () => {
+  await hand.browser.close();
+  await server.stop();
+  await controller.dispose();
+}, 30_000);
+
+/** A request of the page itself, with its session. */
+async function ask(method: 'GET' | 'POST', path: string, { body, etag }: { body?: object; etag?: string } = {}) {
+  const headers = { 'Sec-Fetch-Site': 'same-origin', 'Idempotency-Key': randomUUID(), ...(etag === undefined ? {} : { 'If-Match': etag }) };
+  const response = await hand.context.request.fetch(`/api/labs/${demoIds.lab}${path}`, {
+    method,
+    headers,
+    ...(body === undefined ? {} : { data: body }),
+  });
+  if (!response.ok()) throw new Error(`${method} ${path}: ${await response.text()}`);
+  return { body: await response.json(), etag: response.headers()['etag'] ?? '' };
+}
+
+test('a run started in the browser drives the controller over a serial line, which is lost and found again', async () => {
+  const rig = await ask('POST', '/rigs', {
+    body: { name: 'Serial bench', document: { ...demoRigWide, motion: benchRig }, link: { kind: 'simulated' } },
+  });
+  const rigId = String(rig.body.id);
+  const protocolId = String((await ask('POST', '/protocols', { body: { document } })).body.id);
+  const { etag } = await ask('GET', `/protocols/${protocolId}`);
+  await ask('POST', `/protocols/${protocolId}/revisions`, { body: { rigId, note: '' }, etag });
+
+  await hand.goes(`/rigs/${rigId}/link`, 'link-screen');
+  await hand.tapsOn('Serial line', 'radio');
+  await hand.types('link-path', controller.path);
+  await hand.taps('try-link');
+  await hand.reads('try-result', /A controller answers at .*turntable: firmware .*Nothing was moved\./);
+  await hand.shoots('serial-link');
+  await hand.taps('save-link');
+  await hand.at('rig-screen').waitFor();
+  await hand.reads('rig-link-state', 'live');
+  expect(server.services.stations.get(rigId)?.settings).toEqual({ kind: 'serial', path: controller.path, baudRate: 115_200 });
+
+  await hand.taps('arm');
+  await hand.taps('arm-on-site');
+  await hand.taps('arm-cautions');
+  await hand.taps('arm-confirm');
+  await hand.reads('armed-by', 'Armed by Casimir Thornquist');
+  await hand.goes(`/rigs/${rigId}/start?protocol=${protocolId}`, 'start-screen');
+  await until(() => hand.isEnabled('start-run'), 'the start to be allowed');
+  await hand.keeps('start-run');
+  await hand.at('run-screen').waitFor();
+  const runId = new URL(hand.page.url()).pathname.split('/').at(-1) ?? '';
+
+  await hand.reads('run-state', 'Dwell, far side');
+  const { angleDeg } = JSON.parse(await controller.tell('angle')) as { angleDeg: number };
+  expect(angleDeg).toBeCloseTo(-20.18, 1);
+  await controller.unplug();
+  await hand.reads('link-chip', 'lost');
+  await hand.reads('lost-notice', /The server hears nothing from the controller/);
+  await hand.shoots('serial-lost');
+  await controller.plug();
+  await hand.reads('link-chip', 'live');
+  await hand.at('result-screen').waitFor({ timeout: 40_000 });
+  await hand.reads('headline', 'Finished at');
+
+  const { items: steps } = (await ask('GET', `/runs/${runId}/steps`)).body as { items: StepRowView[] };
+  expect(steps.map(({ kind, outcome }) => `${kind} ${String(outcome)}`)).toEqual(document.steps.map(({ kind }) => `${kind} done`));
+  const dwell = steps[4] as StepRowView;
+  expect(((dwell.endUtcMs ?? NaN) - dwell.startUtcMs) / 1000).toBeCloseTo(12, 2);
+  const { items: events } = (await ask('GET', `/runs/${runId}/events?limit=200`)).body as { items: ChainedEvent[] };
+  const told = events.filter(({ kind }) => kind.startsWith('link') || kind === 'resumed');
+  expect(told.map(({ kind }) => kind)).toEqual(['link-lost', 'link-ready', 'resumed']);
+  expect(told.at(-1)?.data).toMatchObject({ by: 'protocol', cause: 'link-lost', gapS: expect.any(Number) });
+
+  await hand.tapsOn('Step log', 'link');
+  await hand.at('step-log').waitFor();
+  await hand.taps('events-5');
+  await hand.sees('Link lost');
+  await hand.sees('the port has disappeared');
+  await hand.sees('Link ready');
+  await hand.page.getByText('Link lost').scrollIntoViewIfNeeded();
+  await hand.shoots('serial-log');
+  expect(hand.browser.errors).toEqual([]);
+});
