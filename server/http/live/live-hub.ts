@@ -25,7 +25,8 @@ export interface LiveSource {
   view(run: LiveRunKey): Promise<RunView | null>;
   /** Events after `afterSeq`, oldest first, at most `limit`. */
   events(run: LiveRunKey, page: { afterSeq: number; limit: number }): Promise<ChainedEvent[]>;
-  steps(run: LiveRunKey): Promise<StepRow[]>;
+  /** The rows of the step log with these numbers. */
+  steps(run: LiveRunKey, seqs: readonly number[]): Promise<StepRow[]>;
   beat(run: LiveRunKey): Omit<LiveMessages['beat'], 'serverAt'>;
   /** Whether the reader may still see this lab. */
   mayStillRead(reader: SignedIn, labId: string): Promise<boolean>;
@@ -123,6 +124,8 @@ export class LiveHub {
     }
     if (lastEventId !== null && lastEventId <= view.lastSeq) await this.fillGap(reader, lastEventId);
     reader.stream.send(encodeEvent('snapshot', view, view.lastSeq));
+    // With the snapshot comes the server's time: how long a step still takes must not wait for the next second to be right.
+    reader.stream.send(this.encodedBeat(reader.run));
     reader.sentSeq = Math.max(lastEventId !== null && lastEventId > view.lastSeq ? 0 : reader.sentSeq, view.lastSeq);
     const waiting = reader.waiting ?? [];
     reader.waiting = null;
@@ -136,9 +139,9 @@ export class LiveHub {
     if (events.length > longestGap) return;
     for (const event of events) reader.stream.send(encodeEvent('event', event, event.seq));
     reader.sentSeq = events.at(-1)?.seq ?? afterSeq;
-    const touched = new Set(events.map((event) => event.data.seq));
-    if (events.length === 0) return;
-    for (const step of await source.steps(reader.run)) if (touched.has(step.seq)) reader.stream.send(encodeEvent('step', step, null));
+    const touched = new Set(events.map((event) => event.data.seq).filter((seq) => typeof seq === 'number'));
+    if (touched.size === 0) return;
+    for (const step of await source.steps(reader.run, [...touched])) reader.stream.send(encodeEvent('step', step, null));
   }
 
   private keepBeating(): void {
@@ -165,10 +168,13 @@ export class LiveHub {
 
   /** What all who follow the run are told. */
   private beatOf(run: LiveRunKey): Buffer {
-    const { source, clock } = this.parts;
     const samples = joined(this.samples.get(run.rigId) ?? []).map((batch) => encodeEvent('samples', batch, null));
-    const beat = encodeEvent('beat', { serverAt: new Date(clock.utcMs()).toISOString(), ...source.beat(run) }, null);
-    return Buffer.from(samples.join('') + beat);
+    return Buffer.from(samples.join('') + this.encodedBeat(run));
+  }
+
+  private encodedBeat(run: LiveRunKey): string {
+    const { source, clock } = this.parts;
+    return encodeEvent('beat', { serverAt: new Date(clock.utcMs()).toISOString(), ...source.beat(run) }, null);
   }
 
   private async check(reader: Reader): Promise<void> {

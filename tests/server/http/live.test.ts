@@ -78,7 +78,8 @@ test('tells each event once with its number, the rows, the samples and a beat ea
   ]);
 
   const beats = reader.of('beat').map(({ data }) => liveMessageSchemas.beat.parse(data));
-  const times = beats.map(({ serverAt }) => Date.parse(serverAt));
+  // The first comes with the snapshot, the others on the second.
+  const times = beats.slice(1).map(({ serverAt }) => Date.parse(serverAt));
   expect(times.slice(1).every((at, index) => at - (times[index] as number) === 1000)).toBe(true);
   expect(beats.at(-1)).toMatchObject({ link: 'ready', angleDeg: expect.any(Number) });
   const samples = reader.of('samples').map(({ data }) => liveMessageSchemas.samples.parse(data));
