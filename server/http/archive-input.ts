@@ -47,7 +47,7 @@ export async function archiveInputOf(services: Services, run: RunRecord): Promis
     },
     rig: start.rig,
     protocol: start.protocol,
-    steps: await readSteps(db, run.labId, run.id),
+    steps: await readSteps(db, { labId: run.labId, runId: run.id }),
     events: await readEvents(db, { labId: run.labId, runId: run.id }, { afterSeq: 0 }),
     channels: await seriesOf(services, run),
     createdAt: isoOf(services.clock.utcMs()),

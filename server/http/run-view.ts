@@ -78,7 +78,7 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
       predictedEndUtcMs: run.predictedEndAt,
       dwellsPlanned,
     });
-  const steps = await readSteps(services.database.db, run.labId, run.id);
+  const steps = await readSteps(services.database.db, { labId: run.labId, runId: run.id });
   return {
     runId: run.id,
     state: run.state,

@@ -1,4 +1,4 @@
-import { and, asc, desc, eq, gt, isNull, lt, notInArray, or } from 'drizzle-orm';
+import { and, asc, desc, eq, gt, inArray, isNull, lt, notInArray, or } from 'drizzle-orm';
 import { channels, runEvents, runs, runSteps } from '@/db/schema';
 import { isKey, timestampOfUtcMs } from '@/db/schema/columns';
 import type { ChainedEvent, StepRow } from '@/shared/archive/run-records';
@@ -83,12 +83,13 @@ export async function activeRuns(db: Handle, labId: string): Promise<Map<string,
   return new Map(rows.map((row) => [row.rigId, row]));
 }
 
-/** The step log of a run in order. */
-export async function readSteps(db: Handle, labId: string, runId: string): Promise<StepRow[]> {
+/** The step log of a run in order, or those rows of it that are asked for. */
+export async function readSteps(db: Handle, run: { labId: string; runId: string }, seqs?: readonly number[]): Promise<StepRow[]> {
+  const ofRun = and(eq(runSteps.labId, run.labId), eq(runSteps.runId, run.runId));
   const rows = await db
     .select()
     .from(runSteps)
-    .where(and(eq(runSteps.labId, labId), eq(runSteps.runId, runId)))
+    .where(seqs === undefined ? ofRun : and(ofRun, inArray(runSteps.seq, [...seqs])))
     .orderBy(asc(runSteps.seq));
   return rows.map(({ labId: _lab, runId: _run, ...step }) => step);
 }

@@ -14,7 +14,7 @@ export function liveSourceOf(services: () => Services): LiveSource {
       return run === null ? null : storedRunView(services(), run);
     },
     events: ({ labId, runId }, page) => readEvents(services().database.db, { labId, runId }, page),
-    steps: ({ labId, runId }) => readSteps(services().database.db, labId, runId),
+    steps: ({ labId, runId }, seqs) => readSteps(services().database.db, { labId, runId }, seqs),
     beat: ({ rigId }) => {
       const link = services().stations.get(rigId)?.link;
       const health = link?.health();

@@ -199,12 +199,12 @@ function attach(res: Response, run: store.RunRecord, ending: string): void {
 const recordRoutes = [
   mount(contracts.listSteps, async ({ params, membership, services }) => {
     const run = await load(services, membership.labId, params.runId);
-    return { items: await store.readSteps(services.database.db, run.labId, run.id) };
+    return { items: await store.readSteps(services.database.db, { labId: run.labId, runId: run.id }) };
   }),
 
   mount(contracts.stepsCsv, async ({ params, membership, services, res }) => {
     const run = await load(services, membership.labId, params.runId);
-    const text = stepsCsv(await store.readSteps(services.database.db, run.labId, run.id));
+    const text = stepsCsv(await store.readSteps(services.database.db, { labId: run.labId, runId: run.id }));
     attach(res, run, '-steps.csv');
     res.type('text/csv').send(text);
     return undefined;
