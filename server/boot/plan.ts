@@ -39,7 +39,6 @@ export function makePlan(document: ProtocolDocument, rig: RigDocument): Plan {
   const refusals = checkProtocol(document, rig, start);
   if (refusals.length > 0) throw new Unusable(`The protocol "${document.name}" is refused:\n${listed(refusals)}`);
   const timeline = planTimeline({ protocol: document, rig, timeZone: 'UTC' }, start);
-  if (timeline.truncated) throw new Unusable(`The protocol "${document.name}" would execute more than 10,000 steps.`);
   const signal = predictSignal(rig);
   return {
     duration_s: Math.round(timeline.durationS * 1e6) / 1e6,

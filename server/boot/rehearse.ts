@@ -1,4 +1,4 @@
-import { existsSync, readdirSync, statSync } from 'node:fs';
+import { existsSync, mkdirSync, readdirSync, statSync } from 'node:fs';
 import { performance } from 'node:perf_hooks';
 import { parseArgs } from 'node:util';
 import packageJson from '@/package.json';
@@ -10,6 +10,7 @@ import { CODATA_2022_G } from '@/shared/physics/constants';
 import { oscillatorOf } from '@/shared/physics/oscillator';
 import { geometryOf } from '@/shared/physics/torque';
 import { checkProtocol } from '@/shared/protocol/check';
+import { planTimeline } from '@/shared/protocol/timeline';
 import type { RigDocument } from '@/shared/rig/document';
 import { faultKinds, faultKindsNotYet, isFaultKind } from '../engine/rehearsal/rehearsal-faults';
 import { type Rehearsal, rehearse } from '../engine/rehearsal/rehearse';
@@ -38,6 +39,8 @@ const options = {
 
 const GREATEST_SEED = 4_294_967_295;
 const GREATEST_RATE_HZ = 1000;
+/** Five days at 10 Hz: what fits into memory as the text of one file. */
+const MOST_SAMPLES = 5_000_000;
 
 interface Request extends Choice {
   folder: string;
@@ -52,9 +55,9 @@ function requested(args: readonly string[]): Request {
   const { document, rig } = chosenProtocol({ positionals, template: values.template, rig: values.rig, usage });
   const startUtcMs = instant(values.start);
   const simulated = {
-    trueG: number('--true-g', values['true-g'], { above: 0, atMost: Infinity }),
+    trueG: trueG(values['true-g']),
     seed: wholeNumber('--seed', values.seed),
-    rateHz: number('--rate', values.rate, { above: 0, atMost: GREATEST_RATE_HZ }),
+    rateHz: sampleRate(values.rate),
     faults: values.fault.map(faultOf),
   };
   return { document, rig, startUtcMs, simulated, folder: emptyFolder(values.out) };
@@ -68,10 +71,19 @@ function parsedArguments(args: readonly string[]) {
   }
 }
 
-function number(name: string, text: string, { above, atMost }: { above: number; atMost: number }): number {
-  const value = text.trim() === '' ? Number.NaN : Number(text);
-  if (Number.isFinite(value) && value > above && value <= atMost) return value;
-  throw new Unusable(`${name} ${text}: a number above ${above}${atMost === Infinity ? '' : ` and at most ${atMost}`} is needed.`);
+const plainNumber = (text: string) => (text.trim() === '' ? Number.NaN : Number(text));
+
+/** 0 makes a rehearsal without gravity: all that is left is what else moves the pendulum. */
+function trueG(text: string): number {
+  const value = plainNumber(text);
+  if (Number.isFinite(value) && value >= 0) return value;
+  throw new Unusable(`--true-g ${text}: a number from 0 is needed, in m3 kg-1 s-2.`);
+}
+
+function sampleRate(text: string): number {
+  const value = plainNumber(text);
+  if (value > 0 && value <= GREATEST_RATE_HZ) return value;
+  throw new Unusable(`--rate ${text}: a number above 0 and at most ${GREATEST_RATE_HZ} is needed, in Hz.`);
 }
 
 function wholeNumber(name: string, text: string): number {
@@ -101,6 +113,27 @@ function emptyFolder(folder: string | undefined): string {
   if (!statSync(folder).isDirectory()) throw new Unusable(`--out ${folder} is a file; name a folder that is new or empty.`);
   if (readdirSync(folder).length > 0) throw new Unusable(`--out ${folder} is not empty; name a folder that is new or empty.`);
   return folder;
+}
+
+/** Makes the folder before hours are simulated for nothing. */
+function makeFolder(folder: string): void {
+  try {
+    mkdirSync(folder, { recursive: true });
+  } catch (error) {
+    throw new Unusable(`--out ${folder} cannot be made: ${error instanceof Error ? error.message : String(error)}`);
+  }
+}
+
+/** What the protocol is refused for when it begins then, at the home edge, and a rehearsal that would fill the memory. */
+function assertRehearsable({ document, rig, startUtcMs, simulated }: Request): void {
+  const start = { utcMs: startUtcMs, angleDeg: rig.motion?.homeDeg ?? 0 };
+  const refusals = checkProtocol(document, rig, start);
+  if (refusals.length > 0) throw new Unusable(`The protocol "${document.name}" is refused:\n${listed(refusals)}`);
+  const samples = planTimeline({ protocol: document, rig, timeZone: 'UTC' }, start).durationS * simulated.rateHz;
+  if (samples <= MOST_SAMPLES) return;
+  throw new Unusable(
+    `The rehearsal would leave ${Math.round(samples)} samples; at most ${MOST_SAMPLES} are written. Accepted is a --rate up to ${((simulated.rateHz * MOST_SAMPLES) / samples).toPrecision(2)}.`,
+  );
 }
 
 /** The simulated pendulum needs its torque and its free oscillation. */
@@ -160,10 +193,10 @@ function writeArchive(folder: string, start: RunStart, result: Rehearsal): void 
 async function run(args: readonly string[]): Promise<Record<string, unknown>> {
   const beganMs = performance.now();
   const request = requested(args);
-  const { document, rig, startUtcMs, folder } = request;
-  const refusals = checkProtocol(document, rig, { angleDeg: rig.motion?.homeDeg ?? 0 });
-  if (refusals.length > 0) throw new Unusable(`The protocol "${document.name}" is refused:\n${listed(refusals)}`);
+  const { rig, startUtcMs, folder } = request;
+  assertRehearsable(request);
   assertSimulable(rig);
+  makeFolder(folder);
   const start = runStart(request);
   const result = await rehearse({ start, startUtcMs }, rehearsalParts());
   writeArchive(folder, start, result);

@@ -1,11 +1,11 @@
 import { appendEvent, type Sha256 } from '@/shared/archive/chain';
 import type { RunStart } from '@/shared/archive/run-records';
-import { checkProtocol } from '@/shared/protocol/check';
 import type { Finding } from '@/shared/protocol/finding';
 import { planTimeline } from '@/shared/protocol/timeline';
 import type { Clock } from '../interfaces/clock';
 import type { RunStore, StoredRun } from '../interfaces/run-store';
 import type { TurntableLink } from '../interfaces/turntable-link';
+import { checkAtStart } from './check-at-start';
 import { type Arm, CHART_VERSION, type Effect } from './run-context';
 import { RunDriver, type RunChange } from './run-driver';
 
@@ -71,7 +71,7 @@ export class RigSupervisor {
    */
   assertMayStart(start: RunStart): TurntableLink {
     this.assertFree(start.rigId);
-    const findings = checkProtocol(start.protocol, start.rig);
+    const findings = checkAtStart(start, this.parts.linkOf(start.rigId)?.controller() ?? null, this.parts.clock.utcMs());
     if (findings.length > 0) {
       const code = findings.every((finding) => finding.code === 'not-yet') ? 'not-yet' : 'protocol-refused';
       throw new StartRefused(code, findings.map(({ message }) => message).join(' '), findings);

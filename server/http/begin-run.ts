@@ -172,9 +172,10 @@ const rehearsalRateHz = 10;
 /** Queues a rehearsal: a run on the simulated rig in fast time, which takes nobody's rig. */
 export async function beginRehearsal(caller: Caller, begin: Begin & { seed: number }): Promise<RunRecord> {
   const { services, membership } = caller;
-  const refusal = refusalOf(checkProtocol(begin.protocol, begin.rig.document));
-  if (refusal !== null) throw refusal;
   const nowUtcMs = services.clock.utcMs();
+  const homed = { angleDeg: begin.rig.document.motion?.homeDeg ?? 0, utcMs: nowUtcMs, timeZone: membership.timeZone };
+  const refusal = refusalOf(checkProtocol(begin.protocol, begin.rig.document, homed));
+  if (refusal !== null) throw refusal;
   const start: RunStart = {
     ...runStartOf(caller, begin),
     rig: begin.rig.document,

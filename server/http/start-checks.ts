@@ -1,11 +1,12 @@
 import type { StartCheck } from '@/shared/contracts/rigs';
 import { formatDegrees } from '@/shared/lib/format-angle';
 import { formatDayAndClock } from '@/shared/lib/format-time';
-import { checkProtocol } from '@/shared/protocol/check';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { planTimeline, type Timeline, type TimelineItem } from '@/shared/protocol/timeline';
 import type { RigDocument } from '@/shared/rig/document';
+import { checkAtStart } from '../engine/check-at-start';
 import type { RigStation } from '../interfaces/rig-stations';
+import type { ControllerState } from '../interfaces/turntable-link';
 import type { RigRecord } from '../store/rigs';
 import { activeRuns, lastSampleUtcMs, type RunListRow } from '../store/runs-read';
 import type { Services } from './services';
@@ -71,7 +72,7 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
           : fail('Off: switch it on at the rig.'),
     ),
     check('still', 'Turntable', controller?.moving === true ? fail('It is moving: wait until it stands still.') : pass('Stands still.')),
-    check('protocol', 'Protocol on this rig', protocolCheck(plan)),
+    check('protocol', 'Protocol on this rig', protocolCheck(plan, controller, nowUtcMs)),
     check('data', 'Deflection', await dataCheck(services, station, nowUtcMs)),
     check('free', 'No other run', freeCheck(services, plan.rig.id, runs.get(plan.rig.id))),
     check('armed', 'Armed on site', armedCheck(services, plan, timeline)),
@@ -101,8 +102,8 @@ function homedCheck({ protocol }: StartPlan, controller: { positionKnown: boolea
     : fail('Not known, and the protocol does not begin with home. Put a home step first.');
 }
 
-function protocolCheck({ protocol, document }: StartPlan) {
-  const [first, ...others] = checkProtocol(protocol, document);
+function protocolCheck({ protocol, document, timeZone }: StartPlan, controller: ControllerState | null, nowUtcMs: number) {
+  const [first, ...others] = checkAtStart({ protocol, rig: document, timeZone }, controller, nowUtcMs);
   if (first === undefined) return pass('Every step can be carried out within the limits of the rig.');
   const more = others.length === 0 ? '' : ` (and ${String(others.length)} more)`;
   return fail(`${first.path === null ? '' : `Step ${first.path}: `}${first.message}${more}`);

@@ -1,5 +1,6 @@
 import { oscillatorOf } from '../physics/oscillator';
 import type { RigDocument } from '../rig/document';
+import { adviseDocument } from './advise-document';
 import type { ProtocolDocument } from './document';
 import { type Finding, withoutRepeats } from './finding';
 import { sideAt } from './stations';
@@ -24,8 +25,8 @@ const shortestDwell = { alone: 1.25, withRingDown: 0.9 };
 const equalLengths = 0.05;
 
 /**
- * Where a protocol that can be carried out is weak: `cycle-pumps`, `dwell-short`, `unequal-sides`, `drift-not-cancelled`. Each message is
- * two sentences, the number that triggered it and what would be better. Takes drafts; what cannot be told from them is left unsaid.
+ * Where a protocol that can be carried out is weak: `cycle-pumps`, `dwell-short`, `unequal-sides`, `drift-not-cancelled`, and what
+ * `adviseDocument` finds. Each message is two sentences, the number that triggered it and what would be better. Takes drafts; what cannot be told from them is left unsaid.
  */
 export function adviseProtocol(document: ProtocolDocument, rig: RigDocument, start: AdviceStart): Finding[] {
   const { items } = planTimeline({ protocol: document, rig, timeZone: start.timeZone ?? 'UTC' }, start);
@@ -36,6 +37,7 @@ export function adviseProtocol(document: ProtocolDocument, rig: RigDocument, sta
     ...onePerStep(dwellShort(items, rig, hasRingDown)),
     ...unequalSides(sides),
     ...driftNotCancelled(sides),
+    ...adviseDocument(document, rig),
   ]);
 }
 

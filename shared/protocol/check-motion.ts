@@ -5,9 +5,18 @@ import type { Finding } from './finding';
 import { degrees, pathObstacles } from './motion-path';
 import { resolveTarget } from './stations';
 
+/** Where a protocol begins, as far as that is known. */
+export interface CheckStart {
+  /** Turntable angle, deg; null where the controller does not know it, so that only homing may move the sources. */
+  angleDeg: number | null;
+  /** When it begins, UTC ms, and the IANA zone of the lab (default UTC): what depends on the time of day is then checked too. */
+  utcMs?: number;
+  timeZone?: string;
+}
+
 /** What may be known of the rig before a step. Where a repeat may run no pass at all, several states are possible. */
 interface Situation {
-  /** Turntable angle, deg; null before homing. */
+  /** Turntable angle, deg; null while it is not known. */
   angleDeg: number | null;
   /** Length of the swing that has just ended, s; null when anything else came last. */
   swingS: number | null;
@@ -16,14 +25,17 @@ interface Situation {
 interface Walk {
   rig: RigDocument;
   findings: Finding[];
+  /** The controller does not know the position: nothing but homing may move the sources. */
+  isLost: boolean;
 }
 
 /**
  * Findings about where the sources go and about lengths that depend on it: unknown stations, moves before homing, the path rule,
- * speeds, beats. `startDeg` is the turntable angle at the start, null where it is not known. Repeats must not nest deeper than 4.
+ * speeds, beats. Without a start the sources may stand anywhere: a first move is then judged by where it ends, and by its path when the
+ * run starts. Repeats must not nest deeper than 4.
  */
-export function motionFindings(document: ProtocolDocument, rig: RigDocument, startDeg: number | null): Finding[] {
-  const walk: Walk = { rig, findings: [] };
+export function motionFindings(document: ProtocolDocument, rig: RigDocument, start: CheckStart | undefined): Finding[] {
+  const walk: Walk = { rig, findings: [], isLost: start?.angleDeg === null };
   if (rig.motion === undefined) {
     walk.findings.push({
       code: 'motion-missing',
@@ -31,7 +43,7 @@ export function motionFindings(document: ProtocolDocument, rig: RigDocument, sta
       message: 'The rig document has no motion section, so the protocol can be neither planned nor run on it. Add motion to the rig.',
     });
   }
-  const last = afterList(document.steps, [{ angleDeg: startDeg, swingS: null }], { walk, prefix: '' });
+  const last = afterList(document.steps, [{ angleDeg: start?.angleDeg ?? null, swingS: null }], { walk, prefix: '' });
   const station = document.atEnd?.station;
   if (station !== undefined) {
     for (const situation of last) checkSwing({ kind: 'swing', to: station }, situation, { walk, path: 'atEnd' });
@@ -125,10 +137,11 @@ function checkKick(step: KickStep, at: At): void {
 function checkSwing(step: SwingStep, before: Situation, at: At): Situation {
   const { rig } = at.walk;
   const unknown = !knownStation(step.to, at);
-  if (unknown || rig.motion === undefined) return { angleDeg: before.angleDeg, swingS: null };
+  // A swing that is refused still is one: the beat after it is not to blame.
+  if (unknown || rig.motion === undefined) return { angleDeg: before.angleDeg, swingS: 0 };
   checkSpeed(step, rig.motion, at);
   const target = swingMove(step, rig, before.angleDeg ?? 0);
-  if (before.angleDeg === null)
+  if (before.angleDeg === null && at.walk.isLost)
     refuse(at, 'home-first', 'The sources would move before their position is known. Put a home step before the first motion.');
   const fromDeg = before.angleDeg ?? target.targetDeg;
   for (const { code, reason } of pathObstacles(rig.motion, fromDeg, target.targetDeg)) {

@@ -17,6 +17,19 @@ const accepted: Record<string, string> = {
   times: 'a whole number from 1',
   atLeast: 'a whole number from 1',
   atMost: 'a whole number from 1',
+  calmWhen: '{"amplitude_urad" or "drift_urad_per_h" or both, "window_s"}',
+};
+
+/** The fields of the parts of a document, for the sentence that refuses another one. */
+const fieldsInside: Record<string, string> = {
+  to: 'angle_deg',
+  calmWhen: 'amplitude_urad, drift_urad_per_h, window_s',
+  'wait until': 'localTime and ifPast, or channel, below, slopeBelow_per_h and for_s',
+  'repeat until': 'localTime or relativeStatisticalU',
+  atEnd: 'station, drivers',
+  goodWhen: 'residual_urad, channels',
+  channels: 'channel, below, above, slopeBelow_per_h',
+  evaluation: 'method, drift, order, channel',
 };
 
 const greatestDepth = 64;
@@ -112,13 +125,18 @@ function unknownFields(keys: readonly string[], place: Place): Finding {
   const names = keys.map((key) => `"${key}"`).join(', ');
   const whose = place.path === null ? 'the document' : `a ${place.kind ?? 'step'}`;
   const inField = place.field === '' ? whose : place.field;
-  const known = place.field !== '' ? [] : place.path === null ? documentFields : (stepFields[place.kind as StepKind] ?? []);
-  const takes = known.length === 0 ? 'Remove it.' : `Accepted are: ${known.join(', ')}.`;
+  const known = knownFields(place);
   return {
     code: 'unknown-field',
     path: place.path ?? (place.field === '' ? null : (place.field.split('.')[0] ?? null)),
-    message: `Unknown field ${names} in ${inField}. ${takes}`,
+    message: `Unknown field ${names} in ${inField}. ${known === '' ? 'Remove it.' : `Accepted are: ${known}.`}`,
   };
+}
+
+function knownFields({ path, kind, field }: Place): string {
+  const part = field.split('.').findLast((name) => !/^\d+$/.test(name)) ?? '';
+  if (part !== '') return fieldsInside[part] ?? fieldsInside[`${kind ?? ''} ${part}`] ?? '';
+  return (path === null ? documentFields : (stepFields[kind as StepKind] ?? [])).join(', ');
 }
 
 function unknownKind({ path, value }: Place): Finding {

@@ -1,11 +1,13 @@
 import type { RigDocument } from '../rig/document';
-import { motionFindings } from './check-motion';
+import { type CheckStart, motionFindings } from './check-motion';
 import { readDocument } from './check-schema';
 import { nestsTooDeep, structureFindings } from './check-structure';
+import { greatestStepCount } from './cursor';
 import type { ProtocolDocument } from './document';
 import { type Finding, withoutRepeats } from './finding';
 import { locateJsonError } from './json-position';
 import { notYet } from './support';
+import { planTimeline } from './timeline';
 
 /** Characters; a protocol of 10,000 steps written out one by one stays below. */
 const greatestTextLength = 2_000_000;
@@ -13,14 +15,31 @@ const greatestTextLength = 2_000_000;
 /**
  * Everything for which a protocol is refused on this rig: when a revision is issued, started, planned or rehearsed. Takes anything,
  * half-typed documents too, and never throws. An empty list means that the protocol can be carried out.
- * @param start where the sources stand at the start (deg), if that is known; without it the first motion must follow a home step.
+ * @param start where and when it begins, if that is known. Without it, the path of a first move that no home step precedes, and how often
+ * a repeat until a time goes round, are left to the check at the start.
  */
-export function checkProtocol(document: unknown, rig: RigDocument, start?: { angleDeg: number }): Finding[] {
+export function checkProtocol(document: unknown, rig: RigDocument, start?: CheckStart): Finding[] {
   const read = readDocument(document);
   if (read.document === null) return withoutRepeats(read.findings);
   const structure = [...structureFindings(read.document, rig), ...notYet(read.document)];
-  const motion = nestsTooDeep(read.document) ? [] : motionFindings(read.document, rig, start?.angleDeg ?? null);
-  return withoutRepeats([...structure, ...motion]);
+  const motion = nestsTooDeep(read.document) ? [] : motionFindings(read.document, rig, start);
+  const findings = withoutRepeats([...structure, ...motion]);
+  return findings.length === 0 && start !== undefined ? planFindings(read.document, rig, start) : findings;
+}
+
+/** Of a protocol that has no other fault: does it end, and within 10,000 steps, when it begins then and there? */
+function planFindings(document: ProtocolDocument, rig: RigDocument, { angleDeg, utcMs, timeZone = 'UTC' }: CheckStart): Finding[] {
+  if (utcMs === undefined) return [];
+  const plan = planTimeline({ protocol: document, rig, timeZone }, { utcMs, angleDeg: angleDeg ?? rig.motion?.homeDeg ?? 0 });
+  if (!plan.truncated) return [];
+  const counts = new Map<string, number>();
+  for (const { documentPath } of plan.items) {
+    const path = documentPath.split('.', 2).join('.');
+    counts.set(path, (counts.get(path) ?? 0) + 1);
+  }
+  const [path = null] = [...counts].sort((a, b) => b[1] - a[1])[0] ?? [];
+  const message = `Begun at this time the protocol would execute more than ${greatestStepCount.toLocaleString('en-GB')} steps, which is the most that is accepted. Let each pass here take longer, or give atMost.`;
+  return [{ code: 'too-many-steps', path, message }];
 }
 
 /**

@@ -119,16 +119,20 @@ function deadlineOf(repeat: RepeatStep, plan: CursorPlan, moment: CursorMoment):
 }
 
 function anotherPass(repeat: RepeatStep, frame: CursorFrame, context: { plan: CursorPlan; moment: CursorMoment }): boolean {
+  if (repeat.atMost !== undefined && frame.pass >= repeat.atMost) return false;
   if (frame.deadlineUtcMs !== null) return passEndsBy(repeat, frame.deadlineUtcMs, context);
   return frame.pass < (repeat.times ?? 0);
 }
+
+/** An instant taken from the controller's stamps may be off the plan by some µs: so near to the deadline counts as on it, ms. */
+const roundingMs = 0.5;
 
 /** Whether a pass of the repeat that began at the moment would end, by plan, no later than the deadline. */
 function passEndsBy(repeat: RepeatStep, deadlineUtcMs: number, { plan, moment }: { plan: CursorPlan; moment: CursorMoment }): boolean {
   const passPlan: CursorPlan = { ...plan, protocol: { steps: repeat.steps } };
   let state = { ...moment, swingStartUtcMs: null as number | null };
   let cursor = beginCursor();
-  while (state.utcMs <= deadlineUtcMs) {
+  while (state.utcMs <= deadlineUtcMs + roundingMs) {
     const next = advanceCursor(passPlan, cursor, state);
     if (next.item === null) return true;
     cursor = next.cursor;

@@ -33,10 +33,6 @@ function documentNotYet({ goodWhen, evaluation }: ProtocolDocument): Finding[] {
   if (method !== 'equilibrium')
     findings.push(finding('evaluation', `The evaluation method "${method}" is not built yet. Use "equilibrium".`));
   if (drift !== 'aba') findings.push(finding('evaluation', `The drift removal "${drift}" is not built yet. Use "aba".`));
-  if (evaluation?.order !== undefined)
-    findings.push(
-      finding('evaluation', 'evaluation.order belongs to the drift removal "polynomial", which is not built yet. Leave it out.'),
-    );
   return findings;
 }
 

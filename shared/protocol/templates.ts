@@ -72,7 +72,9 @@ const scan: Template = {
     'Dwells at a row of angles, up and down again: where the torque is zero and where it is greatest. For a new rig, or when the table was moved.',
   make: (rig) => {
     const up = scanAngles(rig);
-    return document('Torque scan', { notes: '', steps: [{ kind: 'home' }, ...[...up, ...up.slice(0, -1).reverse()].flatMap(reversal)] });
+    // Every angle once on the way up and once on the way down: at the turning point a second dwell follows without a motion.
+    const steps: Step[] = [...up.flatMap(reversal), { kind: 'dwell', periods: 2 }, ...up.slice(0, -1).reverse().flatMap(reversal)];
+    return document('Torque scan', { notes: '', steps: [{ kind: 'home' }, ...steps] });
   },
   rigFor: asItIs,
 };

@@ -3,6 +3,9 @@ import { VirtualClock } from '@/server/engine/virtual-clock';
 import type { Arm, Effect } from '@/server/engine/run-context';
 import type { RunStart } from '@/shared/archive/run-records';
 import type { RunStore, RunWrite, StoredRun } from '@/server/interfaces/run-store';
+import type { ProtocolDocument } from '@/shared/protocol/document';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import type { RigMotion } from '@/shared/rig/document';
 import { FakeLink } from './fake-link';
 import { MemoryStore, runStart, settle, sha256, shortProtocol, startUtcMs } from './rig-bench';
 
@@ -34,7 +37,7 @@ function makeLab(): Lab {
   const links = new Map(['north-bench', 'south-bench'].map((rigId) => [rigId, new FakeLink(clock)]));
   const runs = new Runs();
   const performed: Effect[] = [];
-  const arms = new Map<string, Arm>();
+  const arms = new Map<string, Arm>(['north-bench', 'south-bench'].map((rigId) => [rigId, runStart().arm as Arm]));
   const newSupervisor = () =>
     new RigSupervisor({
       store: runs,
@@ -126,6 +129,50 @@ test.each([
   });
 });
 
+describe('a protocol that does not home', () => {
+  const unhomed = { ...shortProtocol, steps: shortProtocol.steps.slice(1) };
+  const start = (angleDeg: number | null, more: Partial<RunStart> = {}) => {
+    const lab = makeLab();
+    lab.north.angleDeg = angleDeg;
+    return () => lab.newSupervisor().startRun(lab.make({ protocol: unhomed, ...more }));
+  };
+
+  test('starts where the controller knows its position', () => {
+    expect(start(12)().runId).toBe('run-1');
+  });
+
+  test('is refused where it does not', () => {
+    expect(refusal(start(null))).toMatchObject({ code: 'protocol-refused', message: expect.stringContaining('Put a home step') });
+  });
+
+  test('is refused where the way from where the sources stand meets an arc', () => {
+    const rig = { ...demoRigWide, motion: { ...(demoRigWide.motion as RigMotion), keepOut: [[40, 60]] as [number, number][] } };
+    expect(refusal(start(90, { rig })).findings).toEqual([expect.objectContaining({ code: 'keep-out', path: '1.swing' })]);
+    expect(start(12, { rig })().runId).toBe('run-1');
+  });
+
+  test('a counted angle half a step of the motor beyond a limit is on it, one step beyond is not', () => {
+    expect(start(175.011)().runId).toBe('run-1');
+    expect(refusal(start(175.0225)).findings).toEqual([expect.objectContaining({ code: 'out-of-limits' })]);
+  });
+});
+
+test('a repeat until a time that would go round too often from now on is refused at the start', () => {
+  const lab = makeLab();
+  const often: ProtocolDocument['steps'] = [
+    { kind: 'home' },
+    { kind: 'repeat', until: { localTime: '22:30' }, steps: [{ kind: 'dwell', for_s: 2 }] },
+  ];
+  // 22:00 UTC is 23:00 in Oslo: half past ten is almost a day ahead there.
+  const protocol = { ...shortProtocol, steps: often };
+  const arm = { name: 'Ada Quill', untilUtcMs: startUtcMs + 72 * 3_600_000 };
+  expect(refusal(() => lab.newSupervisor().startRun(lab.make({ protocol, arm })))).toMatchObject({
+    code: 'protocol-refused',
+    findings: [expect.objectContaining({ code: 'too-many-steps', path: '2.repeat' })],
+  });
+  expect(lab.newSupervisor().startRun(lab.make({ protocol, arm, timeZone: 'UTC' })).runId).toBe('run-1');
+});
+
 test.each([
   ['hold', 'held'],
   ['resume', 'running'],
@@ -164,6 +211,7 @@ test('a run that was stored and never began is taken up by its protocol’s rule
   await lab.clock.advance(2_000);
   expect(taken[0]?.facts().state).toBe('held');
   expect(lab.north.motions).toEqual([]);
+  lab.arms.delete('north-bench');
   await taken[0]?.resume('Ada Quill').then((answer) => expect(answer.ok).toBe(false));
   lab.arms.set('north-bench', { name: 'Ada Quill', untilUtcMs: startUtcMs + 3_600_000 });
   await taken[0]?.resume('Ada Quill');

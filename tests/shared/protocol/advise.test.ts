@@ -161,3 +161,35 @@ test('drafts that cannot be carried out are advised on without an exception', ()
   expect(codes(pairs(dwell(620)), { ...demoRigWide, measured: undefined })).toEqual([]);
   expect(codes(pairs(dwell(620)), { ...demoRigWide, motion: undefined })).toEqual([]);
 });
+
+describe('what the document itself says', () => {
+  const found = (protocol: ProtocolDocument, rig: RigDocument = demoRigWide) =>
+    adviseProtocol(protocol, rig, { utcMs: 0, angleDeg: 0 }).map(({ code, path }) => `${code} ${path}`);
+
+  test('fields that do nothing beside the others', () => {
+    expect(
+      found(
+        document([
+          { kind: 'home' },
+          { kind: 'settle', for_s: 5, atMost_s: 9, otherwise: 'stop' },
+          { kind: 'wait', until: { localTime: '06:30' }, otherwise: 'stop' },
+          { kind: 'repeat', times: 2, atLeast: 2, atMost: 5, steps: [dwell(900)] },
+        ]),
+      ),
+    ).toEqual(['no-effect 2.settle', 'no-effect 2.settle', 'no-effect 3.wait', 'no-effect 4.repeat']);
+  });
+
+  test('a move before homing', () => {
+    expect(found(document([{ kind: 'mark', label: 'x' }, swing('near'), { kind: 'home' }]))).toEqual(['no-home 2.swing']);
+    expect(found(document([dwell(900)]))).toEqual([]);
+    expect(found(document([{ kind: 'repeat', times: 2, steps: [{ kind: 'home' }, swing('near')] }]))).toEqual([]);
+  });
+
+  test('drivers that are to be released where the turntable is not safe when free', () => {
+    const releasing: ProtocolDocument = { ...document([{ kind: 'home' }, dwell(900)]), atEnd: { drivers: 'release' } };
+    expect(found(releasing)).toEqual(['drivers-kept atEnd']);
+    const safe = { ...demoRigWide, motion: { ...demoRigWide.motion, safeWhenFree: true } as RigDocument['motion'] };
+    expect(found(releasing, safe)).toEqual([]);
+    expect(found({ ...releasing, atEnd: { drivers: 'keep' } })).toEqual([]);
+  });
+});

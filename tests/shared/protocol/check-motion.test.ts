@@ -123,12 +123,21 @@ describe('the path rule', () => {
 });
 
 describe('motion', () => {
-  test('the first motion must follow home where the position at the start is not known', () => {
-    expect(places([near, dwell, far, dwell])).toEqual(['home-first 1.swing']);
-    expect(places([dwell, home, near])).toEqual([]);
-    expect(checkProtocol(protocol([dwell], { atEnd: { station: 'clear' } }), demoRigWide)).toEqual([
-      expect.objectContaining({ code: 'home-first', path: 'atEnd' }),
-    ]);
+  test('the first motion must follow home where the controller does not know the position', () => {
+    const lost = (steps: Step[], more: Partial<ProtocolDocument> = {}) =>
+      checkProtocol(protocol(steps, more), demoRigWide, { angleDeg: null }).map(({ code, path }) => `${code} ${path}`);
+    expect(lost([near, dwell, far, dwell])).toEqual(['home-first 1.swing']);
+    expect(lost([dwell, home, near])).toEqual([]);
+    expect(lost([dwell], { atEnd: { station: 'clear' } })).toEqual(['home-first atEnd']);
+  });
+
+  test('without a start a first move is judged by where it ends, all others by their way', () => {
+    expect(places([near, dwell, far, dwell])).toEqual([]);
+    const rig = withMotion({ keepOut: [[40, 60]] });
+    const to = (angle_deg: number): Step => ({ kind: 'swing', to: { angle_deg } });
+    expect(places([to(90), dwell, near], rig)).toEqual(['keep-out 3.swing']);
+    expect(places([to(50), dwell], rig)).toEqual(['keep-out 1.swing']);
+    expect(places([to(200), dwell])).toEqual(['out-of-limits 1.swing']);
   });
 
   test('a start at a known angle needs no home, and the path counts from there', () => {

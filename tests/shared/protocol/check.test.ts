@@ -85,6 +85,10 @@ describe('what does not fit the format is refused at its place', () => {
   test('an unknown field inside one of its parts', () => {
     const [finding] = checkProtocol({ formatVersion: 1, name: 'x', steps: [home], atEnd: { stations: 'clear' } }, demoRigWide);
     expect(finding).toMatchObject({ code: 'unknown-field', path: 'atEnd' });
+    expect(finding?.message).toContain('Accepted are: station, drivers.');
+    const [inUntil] = check([home, { kind: 'repeat', until: { localTime: '06:30', ifPast: 'hold' }, steps: [dwell] }]);
+    expect(inUntil).toMatchObject({ code: 'unknown-field', path: '2.repeat' });
+    expect(inUntil?.message).toContain('Accepted are: localTime or relativeStatisticalU.');
   });
 
   test('another format version', () => {
@@ -137,24 +141,57 @@ describe('repeats', () => {
     const [finding] = check([home, repeat(10_000, dwell)]);
     expect(finding).toMatchObject({ code: 'too-many-steps', path: '2.repeat' });
     expect(finding?.message).toContain('10,001');
-    expect(places([home, repeat(1_000_000, repeat(1_000_000, repeat(1_000_000, dwell)))])).toEqual(['too-many-steps 2.repeat']);
+    expect(places([home, repeat(1_000_000, repeat(1_000_000, repeat(1_000_000, dwell)))])).toContain('too-many-steps 2.repeat');
   });
 
-  test('until a local time must take time in each pass, and fit a day into 10,000 steps', () => {
-    const until = (...steps: Step[]): Step => ({ kind: 'repeat', until: { localTime: '06:30' }, steps });
-    expect(places([home, until(near, far)])).toEqual(['endless-repeat 2.repeat', 'too-many-steps 2.repeat']);
-    expect(places([home, until({ kind: 'dwell', for_s: 5 })])).toEqual(['too-many-steps 2.repeat']);
-    expect(places([home, until(near, beat, far, beat)])).toEqual([]);
-  });
-
-  test('bounds that would have no effect are refused', () => {
-    expect(places([home, { kind: 'repeat', times: 2, atMost: 5, steps: [dwell] }])).toEqual(['field-not-used 2.repeat']);
-    expect(places([home, { kind: 'repeat', times: 2, atLeast: 5, steps: [dwell] }])).toEqual(['field-not-used 2.repeat']);
-    expect(places([home, { kind: 'settle', for_s: 5, atMost_s: 9, otherwise: 'stop' }])).toEqual([
-      'field-not-used 2.settle',
-      'field-not-used 2.settle',
+  test('the last move counts as a step', () => {
+    const atEnd = { station: 'clear' };
+    expect(checkProtocol(protocol([home, repeat(9_998, dwell)], { atEnd }), demoRigWide)).toEqual([]);
+    expect(checkProtocol(protocol([home, repeat(9_999, dwell)], { atEnd }), demoRigWide)).toEqual([
+      expect.objectContaining({ code: 'too-many-steps', path: '2.repeat' }),
     ]);
-    expect(places([home, { kind: 'wait', until: { localTime: '06:30' }, otherwise: 'stop' }])).toEqual(['field-not-used 2.wait']);
+  });
+
+  const until = (...steps: Step[]): Step => ({ kind: 'repeat', until: { localTime: '06:30' }, steps });
+  const brief: Step = { kind: 'dwell', for_s: 3 };
+
+  test('until a local time must take time in each pass', () => {
+    expect(places([home, until(near)])).toEqual(['endless-repeat 2.repeat']);
+    expect(places([home, until({ kind: 'mark', label: 'x' }, repeat(3, near))])).toEqual(['endless-repeat 2.repeat']);
+    for (const steps of [[near, far], [brief], [home], [near, beat, far, beat], [repeat(2, near, far)]])
+      expect(places([home, until(...steps)])).toEqual([]);
+  });
+
+  test('until a local time: whether the passes stay within 10,000 steps is known when the start is', () => {
+    const document = protocol([home, until(brief)]);
+    const at = (hour: number, minute: number, timeZone = 'UTC') =>
+      checkProtocol(document, demoRigWide, { angleDeg: 0, utcMs: Date.UTC(2031, 0, 10, hour, minute), timeZone });
+    expect(at(6, 0)).toEqual([]);
+    expect(at(6, 31)).toEqual([expect.objectContaining({ code: 'too-many-steps', path: '2.repeat' })]);
+    expect(at(5, 0, 'Europe/Oslo')).toEqual([]);
+    expect(checkProtocol(document, demoRigWide, { angleDeg: 0 })).toEqual([]);
+  });
+
+  test('what is bounded by atMost counts as far as that', () => {
+    expect(places([home, { ...repeat(20_000, dwell), atMost: 9_999 } as Step])).toEqual([]);
+  });
+
+  test('fields that do nothing beside the others are allowed', () => {
+    expect(
+      places([
+        home,
+        { kind: 'repeat', times: 2, atLeast: 1, atMost: 5, steps: [dwell] },
+        { kind: 'settle', for_s: 5, atMost_s: 9, otherwise: 'stop' },
+        { kind: 'wait', until: { localTime: '06:30' }, atMost_s: 60, otherwise: 'stop' },
+      ]),
+    ).toEqual([]);
+  });
+
+  test('a protocol of more than a year is refused, before its end is no date any more', () => {
+    expect(places([home, { kind: 'dwell', for_s: 1e300 }])).toEqual(['too-long 2.dwell']);
+    expect(places([home, repeat(9_000, { kind: 'dwell', for_s: 3600 })])).toEqual(['too-long 2.repeat']);
+    expect(places([home, { kind: 'swing', to: 'near', speed_deg_s: 1e-7 }])).toEqual(['too-long 2.swing']);
+    expect(places([home, repeat(8_000, { kind: 'dwell', for_s: 3600 })])).toEqual([]);
   });
 });
 
@@ -178,7 +215,7 @@ describe('what is not built yet is valid in the format and refused as not-yet', 
   test.each([
     ['goodWhen', { goodWhen: { residual_urad: 40 } }, 'goodWhen'],
     ['another method', { evaluation: { method: 'period' as const } }, 'evaluation'],
-    ['another drift removal', { evaluation: { drift: 'gls' as const } }, 'evaluation'],
+    ['another drift removal', { evaluation: { drift: 'gls' as const, order: 2 } }, 'evaluation'],
   ])('%s', (_, more, path) => {
     expect(checkProtocol(protocol([home, dwell], more), demoRigWide)).toEqual([expect.objectContaining({ code: 'not-yet', path })]);
   });
@@ -197,7 +234,7 @@ describe('what is not built yet is valid in the format and refused as not-yet', 
           {
             onInterruption: 'resume',
             atEnd: { station: 'clear', drivers: 'release' },
-            evaluation: { method: 'equilibrium', drift: 'aba', channel: 'deflection' },
+            evaluation: { method: 'equilibrium', drift: 'aba', order: 2, channel: 'deflection' },
           },
         ),
         demoRigWide,

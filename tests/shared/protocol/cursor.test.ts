@@ -102,6 +102,18 @@ describe('repeat until a local time', () => {
     expect(run({ steps: until('02:00', [settle(1801)]) }, { secondsPerStep: 1801 })).toHaveLength(3);
   });
 
+  test('a stamp that is some microseconds off the plan costs no pass', () => {
+    const late = Date.UTC(2000, 0, 1) + 0.003;
+    expect(run({ steps: until('02:00', [settle(1800)]) }, { startUtcMs: late, secondsPerStep: 1800 })).toHaveLength(4);
+  });
+
+  test('atMost bounds the passes, here and in a repeat with times', () => {
+    const bounded = (step: Partial<Extract<Step, { kind: 'repeat' }>>): Step[] => [{ kind: 'repeat', steps: [settle(600)], ...step }];
+    expect(run({ steps: bounded({ until: { localTime: '02:00' }, atMost: 3 }) }, { secondsPerStep: 600 })).toHaveLength(3);
+    expect(run({ steps: bounded({ times: 5, atMost: 3 }) }, { secondsPerStep: 600 })).toHaveLength(3);
+    expect(run({ steps: bounded({ times: 2, atMost: 3 }) }, { secondsPerStep: 600 })).toHaveLength(2);
+  });
+
   test('no pass at all is allowed', () => {
     expect(run({ steps: [...until('00:10', [settle(1800)]), mark('after')] }).map(({ path }) => path)).toEqual(['2.mark']);
   });

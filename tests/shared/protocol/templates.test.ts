@@ -72,6 +72,17 @@ test('scan: angles up and down that each rig can reach', () => {
   expect(anglesOf(demoRigNarrow)).toEqual([33, 40, 50, 65, 90, 115, 130, 140, 147, 140, 130, 115, 90, 65, 50, 40, 33]);
 });
 
+// The lengths of the whole scan, 5 h 41 and 4 h 45 with their calibration, leave 22 and 18 dwells of two periods: each angle twice.
+test.each([
+  [demoRigWide, 22],
+  [demoRigNarrow, 18],
+])('scan: each angle is measured once up and once down', (rig, dwells) => {
+  const timeline = planTimeline({ protocol: make('scan', rig), rig, timeZone: 'UTC' }, { utcMs: 0, angleDeg: rig.motion?.homeDeg ?? 0 });
+  const angles = timeline.items.filter(({ kind }) => kind === 'dwell').map(({ angleToDeg }) => angleToDeg);
+  expect(angles).toHaveLength(dwells);
+  for (const angle of angles) expect(angles.filter((other) => other === angle)).toHaveLength(2);
+});
+
 test('empty-control: the steps of the overnight reversals on a rig whose spheres are off', () => {
   expect(make('empty-control').steps).toEqual(make('near-far').steps);
   const rig = templateById('empty-control')?.rigFor(demoRigWide);

@@ -1,0 +1,24 @@
+import type { RunStart } from '@/shared/archive/run-records';
+import { checkProtocol } from '@/shared/protocol/check';
+import type { Finding } from '@/shared/protocol/finding';
+import type { RigDocument } from '@/shared/rig/document';
+import type { ControllerState } from '../interfaces/turntable-link';
+import { countingToleranceDeg } from './counted-angle';
+
+/** What the protocol is refused for when it starts now, with the sources where the controller says they stand; null: it has not answered. */
+export function checkAtStart(
+  { protocol, rig, timeZone }: Pick<RunStart, 'protocol' | 'rig' | 'timeZone'>,
+  controller: Pick<ControllerState, 'positionKnown' | 'angleDeg'> | null,
+  utcMs: number,
+): Finding[] {
+  if (controller === null) return checkProtocol(protocol, rig);
+  const angleDeg = controller.positionKnown && controller.angleDeg !== null ? withinLimits(controller.angleDeg, rig) : null;
+  return checkProtocol(protocol, rig, { angleDeg, utcMs, timeZone });
+}
+
+/** A counted angle may lie half a step of the motor beyond the limit at which the sources were sent to stand. */
+function withinLimits(angleDeg: number, rig: RigDocument): number {
+  if (rig.motion === undefined) return angleDeg;
+  const inside = Math.min(rig.motion.maxDeg, Math.max(rig.motion.minDeg, angleDeg));
+  return Math.abs(inside - angleDeg) <= countingToleranceDeg(rig) ? inside : angleDeg;
+}

@@ -1,0 +1,67 @@
+import type { RigDocument } from '../rig/document';
+import type { ProtocolDocument, RepeatStep, SettleStep, Step, WaitStep } from './document';
+import type { Finding } from './finding';
+import { walkSteps } from './step-path';
+
+/** Advice that needs no plan in time: fields that do nothing, a start that is not homed, drivers that stay on. */
+export function adviseDocument(document: ProtocolDocument, rig: RigDocument): Finding[] {
+  return [...withoutEffect(document), ...noHome(document), ...driversKept(document, rig)];
+}
+
+/** Fields that the format allows and that do nothing beside the others. */
+function withoutEffect(document: ProtocolDocument): Finding[] {
+  return [...walkSteps(document.steps)].flatMap(({ step, path }) =>
+    messagesOf(step).map((message) => ({ code: 'no-effect', path, message })),
+  );
+}
+
+function messagesOf(step: Step): string[] {
+  if (step.kind === 'settle') return settleMessages(step);
+  if (step.kind === 'wait') return waitMessages(step);
+  return step.kind === 'repeat' ? repeatMessages(step) : [];
+}
+
+const given = (step: Record<string, unknown>, names: readonly string[]) => names.filter((name) => step[name] !== undefined);
+
+function settleMessages(step: SettleStep): string[] {
+  if (step.calmWhen !== undefined) return [];
+  return given(step, ['atMost_s', 'otherwise']).map((name) => `${name} goes with calmWhen and does nothing beside for_s. Leave it out.`);
+}
+
+function waitMessages(step: WaitStep): string[] {
+  if (!('localTime' in step.until)) return [];
+  return given(step, ['atMost_s', 'otherwise']).map(
+    (name) =>
+      `${name} goes with a wait for a channel and does nothing beside localTime. Leave it out; ifPast says what to do when the time is past.`,
+  );
+}
+
+function repeatMessages(step: RepeatStep): string[] {
+  const byU = step.until !== undefined && 'relativeStatisticalU' in step.until;
+  return step.atLeast === undefined || byU ? [] : ['atLeast goes with until relativeStatisticalU and does nothing here. Leave it out.'];
+}
+
+function noHome({ steps }: ProtocolDocument): Finding[] {
+  const first = [...walkSteps(steps)].find(({ step }) => ['home', 'swing', 'kick', 'rotate'].includes(step.kind));
+  if (first === undefined || first.step.kind === 'home') return [];
+  return [
+    {
+      code: 'no-home',
+      path: first.path,
+      message:
+        'The sources move here before the protocol has homed them, so it starts only while the controller knows its position. Put a home step first: then every run begins from the same edge.',
+    },
+  ];
+}
+
+function driversKept({ atEnd }: ProtocolDocument, { motion }: RigDocument): Finding[] {
+  if (atEnd?.drivers !== 'release' || motion === undefined || motion.safeWhenFree === true) return [];
+  return [
+    {
+      code: 'drivers-kept',
+      path: 'atEnd',
+      message:
+        'The drivers stay on at the end, because this rig is not marked as safe when free (motion.safeWhenFree). Mark it if its turntable cannot move by itself, or leave drivers at "keep".',
+    },
+  ];
+}
