@@ -45,6 +45,7 @@ export const known = (state: ControllerState): KnownController => ({
   moving: state.moving,
   interlockClosed: state.interlockClosed,
   supplyPresent: state.supplyPresent,
+  warningDue: state.warningDue,
 });
 
 /** Takes down the controller that answers at the start. */

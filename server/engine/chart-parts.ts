@@ -15,6 +15,7 @@ import {
 } from './halting';
 import {
   hasRestarted,
+  noteArmEnded,
   noteArmKey,
   noteEdge,
   noteInterlock,
@@ -27,6 +28,7 @@ import {
   noteStranger,
   noteStrangeMotion,
   noteSupply,
+  unseenCause,
 } from './observations';
 import { type RunContext, type RunEvent } from './run-context';
 import { finishMotion, noteBegan, noteEnded, takeAhead } from './motions';
@@ -102,6 +104,8 @@ export const isAhead = ({ context, event }: Told) =>
 export const isCancelled = ({ context }: Told) => context.run.ahead?.cancelled === true;
 export const bootedAnew = ({ context, event }: Told) =>
   event.type === 'link.ready' && hasRestarted(context.run, event.link.controller.bootId);
+const disturbedUnseen = ({ context, event }: Told) =>
+  event.type === 'link.ready' && unseenCause(context.run, event.link.controller) !== null;
 const isOpenOrAbsent = ({ event }: Told) =>
   (event.type === 'link.interlock' && !event.link.closed) || (event.type === 'link.supply' && !event.link.present);
 const endedBy =
@@ -169,6 +173,9 @@ export const heard = {
   'link.refused': { actions: act(noteRefusal) },
 };
 
+/** A controller that restarted, or lost interlock or supply, while nobody listened. */
+export const returns = [...guarded(bootedAnew, gravely(noteReset, noteReady)), ...guarded(disturbedUnseen, gravely(noteReady))];
+
 /** What ends or changes a run that is under way, whatever step it is in. */
 export const underWay = {
   ...heard,
@@ -177,7 +184,8 @@ export const underWay = {
   'hold-after-dwell': { actions: act(requestHoldAfterDwell) },
   resume: { actions: act((draft) => draft.log('resume-refused', { why: 'the run is not held' })) },
   'link.lost': interruptedBy(noteLost),
-  'link.ready': [...guarded(bootedAnew, gravely(noteReset, noteReady)), { actions: act(noteReady) }],
+  'arm-ended': { target: 'holding' as const, actions: act(noteArmEnded, beginHold) },
+  'link.ready': [...returns, { actions: act(noteReady) }],
   'link.reset': gravely(noteReset),
   'link.interlock': [...guarded(isOpenOrAbsent, gravely(noteInterlock)), { actions: act(noteInterlock) }],
   'link.supply': [...guarded(isOpenOrAbsent, gravely(noteSupply)), { actions: act(noteSupply) }],

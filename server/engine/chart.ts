@@ -33,8 +33,6 @@ import {
   explainHomeFailure,
   explainNoReturn,
   fails,
-  gravely,
-  guarded,
   heard,
   isAhead,
   isCancelled,
@@ -44,6 +42,7 @@ import {
   motionEnds,
   pick,
   refusals,
+  returns,
   strangeMotion,
   underWay,
   when,
@@ -137,8 +136,10 @@ const machine = chart.createMachine({
       on: {
         ...underWay,
         ...pick(comingToRest, 'link.motion-began', 'link.motion-ended', 'link.homed', 'link.refused-controller'),
-        'link.ready': [...guarded(bootedAnew, gravely(noteReset, noteReady)), { actions: act(noteReady, awaitReturn) }],
+        'link.ready': [...returns, { actions: act(noteReady, awaitReturn) }],
         'link.standstill': [
+          // Told on a line that is only just coming back: what counts is the standstill after it is ready.
+          { guard: ({ context }) => !context.run.linkUp, actions: act(noteStandstill) },
           {
             guard: when((draft) => returnRefusal(draft) === null, noteStandstill, takeAheadUnseen),
             target: 'choosing',
@@ -223,6 +224,14 @@ const isDue = ({ context }: RunSnapshot, utcMs: number) => context.deadlineUtcMs
 
 const over: readonly ChartState[] = ['stopped', 'finished', 'failed'];
 export const isRunOver = (snapshot: RunSnapshot): boolean => over.includes(snapshot.state);
+
+const atRest: readonly ChartState[] = ['holding', 'held', 'stopping', ...over];
+/** Neither over nor brought to rest by a hold or a stop. */
+export const isUnderWay = (snapshot: RunSnapshot): boolean => !atRest.includes(snapshot.state);
+
+/** Whether an arm must stand at this time: a run on a rig, before the end of its arm, which nothing has made void yet. */
+export const isArmExpected = (start: RunStart, { context }: RunSnapshot, utcMs: number): boolean =>
+  start.simulated === null && context.arm !== null && context.armVoid === null && context.arm.untilUtcMs > utcMs;
 
 /** States in which the controller may move the sources: only in these is the motion lease renewed. */
 export const wantsMotion = ({ state, context }: RunSnapshot): boolean =>

@@ -203,7 +203,8 @@ function resumeStep(draft: Draft): void {
   if (context.startedAtUtcMs === null) return startRun(draft);
   if (step === null || !step.broken) return chooseNext(draft);
   if (step.row.kind === 'home') return beginHome(draft, step.item);
-  if (step.motion === null) return beginStanding(draft, step.item, step.plannedMs);
+  // A dwell or settle lasts as long as first planned; a wait ends at its time of day, however long it was held.
+  if (step.motion === null) return beginStanding(draft, step.item, step.row.kind === 'wait' ? null : step.plannedMs);
   beginSwing(draft, { item: step.item, late: true });
 }
 
@@ -286,10 +287,12 @@ function confirm(draft: Draft): void {
 export function becomeFinished(draft: Draft): void {
   const { context, start } = draft;
   const { moment } = context;
-  const release = start.protocol.atEnd?.drivers === 'release';
+  const asked = start.protocol.atEnd?.drivers === 'release';
+  const release = asked && start.rig.motion?.safeWhenFree === true;
   if (release) draft.command((id) => ({ kind: 'stop', id, releaseDrivers: true }));
   end(draft, moment.utcMs);
-  draft.log('finished', { dwells: context.dwellsDone, drivers: release ? 'release' : 'keep' }, moment);
+  const why = asked && !release ? { driversWhy: 'the rig is not marked as safe when free (motion.safeWhenFree)' } : {};
+  draft.log('finished', { dwells: context.dwellsDone, drivers: release ? 'release' : 'keep', ...why }, moment);
   draft.notify('finished', 'The run finished as planned.');
 }
 

@@ -1,4 +1,4 @@
-import type { StepOutcome } from '@/shared/archive/run-records';
+import type { StepOutcome, StepRow } from '@/shared/archive/run-records';
 import { advanceCursor } from '@/shared/protocol/cursor';
 import { swingMove } from '@/shared/protocol/durations';
 import type { Instant } from '../interfaces/clock';
@@ -7,6 +7,9 @@ import { endStanding, openSwing, sendMove, standingEndUtcMs, toleranceDeg, write
 import { LATE_MS, MOTION_GRACE_MS } from './timing';
 
 /** How a motion is followed: begun, refused, ended, finished. */
+
+/** The controller's clock is told in whole microseconds. */
+const STAMP_ROUNDING_MS = 0.001;
 
 /** The controller began the move that was sent ahead (or must have, unseen): the standing step is over and the swing is the present step. */
 export function takeAhead(draft: Draft): void {
@@ -34,8 +37,9 @@ export function noteBegan(draft: Draft): void {
   const { context, event } = draft;
   const { step, motion } = draft;
   const seen = event.type === 'link.motion-began';
-  const stamp = seen ? draft.stamp : { utcMs: motion.startUtcMs ?? step.row.startUtcMs, uS: context.uPlanS };
+  const stamp = seen ? inOrder(draft.stamp, step.row) : { utcMs: motion.startUtcMs ?? step.row.startUtcMs, uS: context.uPlanS };
   motion.began = true;
+  draft.controller.warningDue = false;
   context.moveRetries = 0;
   context.uPlanS = stamp.uS;
   if (context.onCadence && stamp.utcMs - step.row.plannedStartUtcMs > LATE_MS) motion.late = true;
@@ -44,6 +48,12 @@ export function noteBegan(draft: Draft): void {
   if (step.row.kind === 'swing') context.swingStartUtcMs = stamp.utcMs;
   draft.saveRow(step.row);
   confirmResume(draft);
+}
+
+/** No timed motion begins before its time: a stamp that says so by no more than its own uncertainty means that time. */
+function inOrder(stamp: Instant, { plannedStartUtcMs }: StepRow): Instant {
+  const early = plannedStartUtcMs - stamp.utcMs;
+  return early > 0 && early <= STAMP_ROUNDING_MS + 3000 * stamp.uS ? { ...stamp, utcMs: plannedStartUtcMs } : stamp;
 }
 
 /** From its beginning on, a motion may take as long as its profile and some grace. */
@@ -96,6 +106,7 @@ export function finishMotion(draft: Draft): void {
   if (row.kind === 'home') row.angleSource = 'edge-verified';
   draft.closeRow({ at, angleDeg: row.angleEndDeg, outcome });
   draft.standAt(at, row.angleEndDeg ?? moment.angleDeg);
+  draft.context.station = row.station;
   draft.context.onCadence = false;
 }
 

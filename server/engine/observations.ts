@@ -1,5 +1,6 @@
 import { known } from './beginning';
 import type { Draft } from './draft';
+import type { ControllerState } from '../interfaces/turntable-link';
 import type { RunContext } from './run-context';
 import { noteGrave } from './halting';
 
@@ -13,12 +14,27 @@ export function noteReady(draft: Draft): void {
   const { context } = draft;
   const { controller } = link;
   const { linkDownSinceUtcMs } = context;
+  const unseen = unseenCause(context, controller);
   context.controller = known(controller);
   context.linkUp = true;
   context.linkDownSinceUtcMs = null;
   context.uPlanS = draft.stamp.uS;
   const gapS = linkDownSinceUtcMs === null ? 0 : Math.max(0, (draft.nowUtcMs - linkDownSinceUtcMs) / 1000);
   draft.log('link-ready', { bootId: controller.bootId, firmware: controller.firmware, gapS });
+  if (unseen === null) return;
+  draft.log(unseen, { [unseen === 'interlock' ? 'closed' : 'present']: false, unseen: true });
+  noteGrave(draft, unseen);
+}
+
+/**
+ * What happened at the rig while nobody listened, whatever the inputs are now. An interlock that was opened leaves a warning due before the
+ * next motion; a supply that was lost takes the position with it, as nothing else does but homing and a restart of the controller.
+ */
+export function unseenCause({ controller: before, step }: RunContext, now: ControllerState): 'interlock' | 'supply' | null {
+  if (before === null || before.bootId !== now.bootId) return null;
+  if (before.interlockClosed && (!now.interlockClosed || (before.warningDue !== true && now.warningDue))) return 'interlock';
+  const positionLost = before.positionKnown && !now.positionKnown && step?.row.kind !== 'home';
+  return before.supplyPresent && (!now.supplyPresent || positionLost) ? 'supply' : null;
 }
 
 /** Whether the controller that answers has restarted since it was last heard. */
@@ -53,7 +69,8 @@ export function noteReset(draft: Draft): void {
 export function noteInterlock(draft: Draft): void {
   const { link } = draft.told('link.interlock');
   const { closed } = link;
-  if (draft.context.controller !== null) draft.context.controller.interlockClosed = closed;
+  const { controller } = draft.context;
+  if (controller !== null) Object.assign(controller, { interlockClosed: closed, warningDue: closed ? controller.warningDue : true });
   draft.log('interlock', { closed });
   if (!closed) noteGrave(draft, 'interlock');
 }
@@ -66,6 +83,15 @@ export function noteSupply(draft: Draft): void {
   if (controller !== null && !present) Object.assign(controller, { positionKnown: false, angleDeg: null });
   draft.log('supply', { present });
   if (!present) noteGrave(draft, 'supply');
+}
+
+/** A person ended the arm: nothing of this run may move any more. */
+export function noteArmEnded(draft: Draft): void {
+  const { context } = draft;
+  const { name = 'the rig' } = context.arm ?? {};
+  draft.log('arm-ended', { name });
+  draft.because('arm-ended', `The arm of ${name} was ended. Arm the rig again on site, then resume.`);
+  context.armVoid = 'it was ended';
 }
 
 export function noteArmKey(draft: Draft): void {

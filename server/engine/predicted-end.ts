@@ -12,7 +12,7 @@ export interface PredictionInput {
 /** When the run would finish if it went on from here without another hitch, UTC ms. */
 export function predictEndUtcMs(start: RunStart, context: RunContext, { nowUtcMs, eachStep }: PredictionInput): number {
   let { cursor } = context;
-  let state = afterPresentStep(context, nowUtcMs);
+  let state = afterPresentStep(start, context, nowUtcMs);
   for (;;) {
     const next = advanceIfPossible(start, cursor, state);
     if (next === null || next.item === null) return state.utcMs;
@@ -32,7 +32,9 @@ function advanceIfPossible(...args: Parameters<typeof advanceCursor>): ReturnTyp
   }
 }
 
-function afterPresentStep({ step, moment, swingStartUtcMs }: RunContext, nowUtcMs: number) {
+function afterPresentStep(start: RunStart, { step, moment, swingStartUtcMs }: RunContext, nowUtcMs: number) {
+  if (step?.broken === true && step.row.kind === 'wait')
+    return stateAfterIfPossible(step.item.step, start, { utcMs: nowUtcMs, angleDeg: moment.angleDeg, swingStartUtcMs: null });
   if (step === null) return { utcMs: Math.max(moment.utcMs, nowUtcMs), angleDeg: moment.angleDeg, swingStartUtcMs: null };
   const { row, motion, broken, plannedMs } = step;
   const lengthMs = plannedMs ?? (row.plannedEndUtcMs ?? row.startUtcMs) - row.plannedStartUtcMs;

@@ -102,6 +102,8 @@ export interface KnownController {
   moving: boolean;
   interlockClosed: boolean;
   supplyPresent: boolean;
+  /** As in `ControllerState`: it tells of an interlock that was opened and closed again while nobody listened. */
+  warningDue?: boolean;
 }
 
 export interface RunContext {
@@ -126,6 +128,8 @@ export interface RunContext {
   moveRetries: number;
   /** Where and when the step before the present one ended: the start of the next. */
   moment: Instant & { angleDeg: number };
+  /** Name of the station to which the sources were brought last: two stations may share an angle. */
+  station?: string;
   /** The present step began at the planned end of a dwell, settle or wait: a swing now is timed, and `late` if it begins later. */
   onCadence: boolean;
   /** Start of the swing before, from which a beat is counted; null when no swing came before or it was broken. */
@@ -164,6 +168,8 @@ export type RunEvent =
   | Told<'stop', { by: string; acted: string | null }>
   | Told<'hold-after-dwell', { by: string }>
   | Told<'resume', { by: string; arm: Arm | null }>
+  /** A person ended the arm of the rig before its time. */
+  | Told<'arm-ended'>
   | Told<'server-restarted', { aliveUtcMs: number }>
   | Told<'database-away', { sinceUtcMs: number }>
   /** A motion that was saved but, because a hold or stop overtook it, never sent. */

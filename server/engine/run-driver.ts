@@ -1,14 +1,16 @@
-import { appendEvent, type ChainHead, emptyChain, type Sha256 } from '@/shared/archive/chain';
+import { type ChainHead, emptyChain, type Sha256 } from '@/shared/archive/chain';
 import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
 import type { Clock, Instant } from '../interfaces/clock';
 import { type RunStore, StaleRunError, type StoredRun } from '../interfaces/run-store';
 import type { LinkEvent, TurntableLink } from '../interfaces/turntable-link';
-import { beginRun, deadlineOf, isRunOver, wantsMotion } from './chart';
-import { type Advance, type Arm, CHART_VERSION, type Effect, type Happening, type RunEvent, type RunSnapshot } from './run-context';
+import { chained } from './chained';
+import { beginRun, deadlineOf, isArmExpected, isRunOver, isUnderWay, wantsMotion } from './chart';
+import { type Advance, type Arm, CHART_VERSION, type Effect, type RunEvent, type RunSnapshot } from './run-context';
 import { advanceSafely } from './advance-safely';
 import { createPredictor, factsOf, mayResume, plannedDwells, type RunFacts, summaryOf } from './run-facts';
 import { DATABASE_GRACE_MS, RunSaver } from './run-saver';
 import { ALIVE_MS, RunTimers } from './run-timers';
+import { isOwn, type OwnEffect, snapshotIn, type StoredSnapshot } from './stored-snapshot';
 
 export interface RunDriverParts {
   start: RunStart;
@@ -35,16 +37,6 @@ export interface RunChange {
 }
 
 export type Answer = { ok: true; serverAtUtcMs: number } | { ok: false; why: string };
-
-type OwnEffect = Exclude<Effect, { kind: 'link' }>;
-
-/** Snapshot as stored, with what the next process has to know of this one. */
-export interface StoredSnapshot extends RunSnapshot {
-  /** Until when the process is known to have lived. */
-  aliveUtcMs: number;
-  /** Effects that were to be performed after this write; commands to the controller are not repeated, the run reconciles instead. */
-  toPerform: OwnEffect[];
-}
 
 type Item = { event: RunEvent; done?: (result: Advance | null) => void } | 'beat' | 'alive';
 
@@ -243,6 +235,7 @@ export class RunDriver {
         if (item === 'beat') this.beat();
         else if (item === 'alive') await this.saveAlive();
         else await this.take(item);
+        this.noticeEndOfArm();
       }
     } catch (error) {
       this.breakOff(error);
@@ -269,7 +262,7 @@ export class RunDriver {
   }
 
   private async saveThenAct(result: Advance, halted: boolean): Promise<void> {
-    const events = this.chainOn(result.events);
+    const events = chained(result.events, this.chain, this.parts.sha256);
     const saved = await this.save(result.snapshot, { steps: result.steps, events, toPerform: result.effects.filter(isOwn) });
     if (halted) this.halting -= 1;
     if (!saved) return;
@@ -280,15 +273,6 @@ export class RunDriver {
     this.armTimers();
     this.tell({ facts: this.facts(), steps: result.steps, events });
     if (isRunOver(this.snapshot)) this.finish();
-  }
-
-  private chainOn(happenings: Happening[]): ChainedEvent[] {
-    let head = this.chain;
-    return happenings.map(({ at, kind, data }) => {
-      const event = appendEvent(head, { at: new Date(at.utcMs).toISOString(), kind, data }, this.parts.sha256);
-      head = event;
-      return event;
-    });
   }
 
   private async save(
@@ -322,9 +306,24 @@ export class RunDriver {
     if (effect.kind !== 'link') return this.outside(() => this.parts.perform(effect));
     const { command } = effect;
     const startsMotion = command.kind === 'home' || command.kind === 'move';
-    if (startsMotion && (this.halting > 0 || this.databaseAwaySinceUtcMs !== null)) return;
+    if (startsMotion && this.mayNotMove()) return;
     if (startsMotion) this.lastBeatMs = this.parts.clock.monotonicMs();
     this.parts.link.send(command);
+  }
+
+  /** A hold or stop is under way, the database is away, or the rig is armed no more: nothing is set in motion. */
+  private mayNotMove(): boolean {
+    return this.halting > 0 || this.databaseAwaySinceUtcMs !== null || this.isDisarmed();
+  }
+
+  private isDisarmed(): boolean {
+    return this.parts.armNow() === null && isArmExpected(this.parts.start, this.snapshot, this.now().utcMs);
+  }
+
+  private noticeEndOfArm(): void {
+    if (this.closed || !isUnderWay(this.snapshot) || !this.isDisarmed()) return;
+    if (this.inbox.some((item) => typeof item !== 'string' && item.event.type === 'arm-ended')) return;
+    this.inbox.push({ event: { type: 'arm-ended', at: this.now() } });
   }
 
   /** The write goes on being tried; meanwhile nothing may move. */
@@ -338,7 +337,7 @@ export class RunDriver {
 
   /** Granted only while the loop turns, in a state that wants motion; a short outage of the database is bridged. */
   private mayRenewLease(): boolean {
-    if (this.closed || this.halting > 0 || this.databaseAwaySinceUtcMs !== null || !wantsMotion(this.snapshot)) return false;
+    if (this.closed || this.mayNotMove() || !wantsMotion(this.snapshot)) return false;
     const nowMs = this.parts.clock.monotonicMs();
     const { busySinceMs } = this.saver;
     if (busySinceMs !== null) return nowMs - busySinceMs <= DATABASE_GRACE_MS;
@@ -386,11 +385,4 @@ export class RunDriver {
   private tell(change: RunChange): void {
     for (const listener of this.listeners) this.outside(() => listener(change));
   }
-}
-
-const isOwn = (effect: Effect): effect is OwnEffect => effect.kind !== 'link';
-
-function snapshotIn(stored: StoredRun): RunSnapshot {
-  const { version, state, context } = stored.snapshot as StoredSnapshot;
-  return { version, state, context };
 }

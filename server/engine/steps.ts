@@ -16,22 +16,15 @@ import { pathObstacles } from '@/shared/protocol/motion-path';
 import { stationAt } from '@/shared/protocol/stations';
 import type { RigMotion } from '@/shared/rig/document';
 import type { Instant } from '../interfaces/clock';
+import { countedU, countingToleranceDeg } from './counted-angle';
 import type { Draft } from './draft';
 import type { ActiveStep, Motion, RunContext } from './run-context';
 import { BEGIN_GRACE_MS, LEAD_MS, LEAST_LEAD_MS, MOTION_GRACE_MS } from './timing';
 
 /** How steps begin and end: the actions of the chart that follow the protocol. */
 
-/** Half a step of the motor and rounding: nearer than this the sources stand where they should, deg. */
-export function toleranceDeg(draft: Draft): number {
-  return 0.51 / (draft.start.rig.motion?.stepsPerDegree ?? 1) + 1e-6;
-}
-
-/** Standard uncertainty of a counted angle: a step and the backlash, both rectangular, deg. */
-function countedU(draft: Draft): number {
-  const { stepsPerDegree = 1, backlash_deg: backlashDeg = 0 } = draft.start.rig.motion ?? {};
-  return Math.hypot(1 / stepsPerDegree, backlashDeg) / Math.sqrt(12);
-}
+/** Nearer than this the sources stand where they should, deg. */
+export const toleranceDeg = (draft: Draft): number => countingToleranceDeg(draft.start.rig);
 
 interface RowPlan {
   item: PlannedItem;
@@ -58,7 +51,7 @@ function newRow(draft: Draft, { item, station, endUtcMs }: RowPlan): StepRow {
     angleEndDeg: null,
     outcome: null,
     angleSource: 'counted',
-    uAngleDeg: countedU(draft),
+    uAngleDeg: countedU(draft.start.rig),
     good: null,
   };
 }
@@ -125,7 +118,7 @@ function armHasEnded(draft: Draft, atUtcMs: number): boolean {
 export function writeMark(draft: Draft, item: PlannedItem): void {
   const { context } = draft;
   const { moment } = context;
-  const row = newRow(draft, { item, station: stationAt(draft.start.rig, moment.angleDeg), endUtcMs: moment.utcMs });
+  const row = newRow(draft, { item, station: stationOf(draft), endUtcMs: moment.utcMs });
   draft.openStep({ item, row, plannedMs: 0, motion: null, broken: false });
   draft.closeRow({ at: moment, angleDeg: row.angleStartDeg, outcome: 'done' });
   context.step = null;
@@ -263,9 +256,10 @@ function describeTime(step: Step): string {
 /** The station at which the sources were brought to stand; a counted angle is off the station's by up to half a step. */
 function stationOf(draft: Draft): string {
   const { rig } = draft.start;
-  const { angleDeg } = draft.context.moment;
+  const { moment, station = '' } = draft.context;
   const tolerance = toleranceDeg(draft);
-  return Object.keys(rig.stations).find((name) => Math.abs((rig.stations[name]?.value ?? Number.NaN) - angleDeg) <= tolerance) ?? '';
+  const standsAt = (name: string) => Math.abs((rig.stations[name]?.value ?? Number.NaN) - moment.angleDeg) <= tolerance;
+  return standsAt(station) ? station : (Object.keys(rig.stations).find(standsAt) ?? '');
 }
 
 function standingEnd(draft: Draft, step: Step): { endUtcMs: number; holds: boolean } {

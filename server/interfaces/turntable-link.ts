@@ -25,6 +25,8 @@ export interface ControllerState {
   supplyPresent: boolean;
   armKey: boolean;
   driversOn: boolean;
+  /** A warning comes before the next motion: the controller has just started, or the interlock was opened since the last one. */
+  warningDue: boolean;
 }
 
 export type LinkCommand =

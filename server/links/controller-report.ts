@@ -41,7 +41,7 @@ export class ControllerReport {
     switch (what.word) {
       case 'began':
         this.state = 'moving';
-        return;
+        return this.set(FLAG.warningDue, false);
       case 'ended':
         this.state = 'rest';
         this.place(what.position);
@@ -49,7 +49,8 @@ export class ControllerReport {
       case 'homed':
         return this.place(0);
       case 'interlock':
-        return this.set(FLAG.interlockClosed, what.closed);
+        this.set(FLAG.interlockClosed, what.closed);
+        return what.closed ? undefined : this.set(FLAG.warningDue, true);
       case 'supply':
         this.set(FLAG.supplyPresent, what.present);
         return what.present ? undefined : this.place(null);
@@ -91,6 +92,7 @@ export class ControllerReport {
       supplyPresent: this.has(FLAG.supplyPresent),
       armKey: this.has(FLAG.armKey),
       driversOn: this.has(FLAG.driversOn),
+      warningDue: this.has(FLAG.warningDue),
     };
   }
 

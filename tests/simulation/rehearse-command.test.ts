@@ -163,7 +163,25 @@ test('a rig whose masses may not pass the balls goes through as well', async () 
   expect(answer(out)).toMatchObject({ outcome: 'finished', holds: 0 });
 });
 
+test('without gravity all that moves the pendulum is something else', async () => {
+  const { code } = await command(short(), '--out', at('weightless'), '--true-g', '0');
+  expect(code).toBe(0);
+  expect(JSON.parse(readFileSync(at('weightless/run.json'), 'utf8'))).toMatchObject({ simulated: { trueG: 0 } });
+});
+
+test('no row of the log begins before the one above it has ended, to the microsecond', () => {
+  const rows = readFileSync(at('night/steps.csv'), 'utf8')
+    .trim()
+    .split('\n')
+    .slice(1)
+    .map((row) => row.split(','));
+  expect(rows.length).toBeGreaterThan(20);
+  for (const [index, row] of rows.entries())
+    if (index > 0) expect([row[0], String(row[7]) >= String(rows[index - 1]?.[8])]).toEqual([row[0], true]);
+});
+
 describe('unusable input ends with 2, a sentence, and no folder', () => {
+  const month = { formatVersion: 1, name: 'x', steps: [{ kind: 'home' }, { kind: 'dwell', for_s: 30 * 86_400 }] };
   mkdirSync(at('full'));
   writeFileSync(at('full/kept.txt'), 'kept');
   const unusable: [string, string[], string][] = [
@@ -187,6 +205,7 @@ describe('unusable input ends with 2, a sentence, and no folder', () => {
     ['a rig without a period', [short(), '--rig', file('untimed.json', { ...demoRigWide, measured: undefined })], 'measured.period_s'],
     ['a seed that is none', [short(), '--seed', '1.5'], '--seed 1.5'],
     ['a rate of nothing', [short(), '--rate', '0'], '--rate 0'],
+    ['more samples than fit into memory', [file('month.json', month), '--rate', '10'], 'Accepted is a --rate up to 1.9'],
     ['a G that is none', [short(), '--true-g', 'big'], '--true-g big'],
     ['a start without a zone', [short(), '--start', '2000-01-01T00:00:00'], '--start'],
     ['a drawn geometry', [short(), '--draw-geometry'], 'not built yet'],
@@ -206,6 +225,13 @@ describe('unusable input ends with 2, a sentence, and no folder', () => {
 
   test('no folder to write to', async () => {
     expect(await command(short())).toMatchObject({ code: 2, err: expect.stringContaining('--out DIR is needed') });
+  });
+
+  test('a folder that cannot be made', async () => {
+    expect(await command(short(), '--out', join(short(), 'below'))).toMatchObject({
+      code: 2,
+      err: expect.stringContaining('cannot be made'),
+    });
   });
 
   test('a folder that is not empty keeps what it holds', async () => {

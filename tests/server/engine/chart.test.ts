@@ -18,6 +18,7 @@ const controller: ControllerState = {
   supplyPresent: true,
   armKey: true,
   driversOn: true,
+  warningDue: false,
 };
 const at = (seconds: number) => ({ utcMs: startUtcMs + 1000 * seconds, uS: 0.0002 });
 const heard = (link: LinkEvent): RunEvent => ({ type: `link.${link.kind}`, at: link.at, link }) as RunEvent;
@@ -122,6 +123,9 @@ type Name =
   | 'restart'
   | 'database'
   | 'ready'
+  | 'ready, warning anew'
+  | 'ready, position lost'
+  | 'disarmed'
   | 'standstill'
   | 'stranger'
   | 'foreign';
@@ -142,6 +146,19 @@ function eventOf(name: Name, from: { snapshot: RunSnapshot; now: number }): RunE
     restart: { type: 'server-restarted', at: now, aliveUtcMs: now.utcMs - 5000 },
     database: { type: 'database-away', at: now, sinceUtcMs: now.utcMs - 5000 },
     ready: heard({ kind: 'ready', at: now, controller: { ...controller, angleDeg: 20.18 }, sameBoot: true }),
+    'ready, warning anew': heard({
+      kind: 'ready',
+      at: now,
+      controller: { ...controller, angleDeg: 20.18, warningDue: true },
+      sameBoot: true,
+    }),
+    'ready, position lost': heard({
+      kind: 'ready',
+      at: now,
+      controller: { ...controller, angleDeg: null, positionKnown: false },
+      sameBoot: true,
+    }),
+    disarmed: { type: 'arm-ended', at: now },
     standstill: heard({ kind: 'standstill', at: now, commandId: 'acted-1', angleDeg: 20.18 }),
     stranger: heard({ kind: 'refused-controller', at: now, why: 'another major version' }),
     foreign: heard({ kind: 'motion-began', at: now, commandId: 'unknown', angleDeg: 3 }),
@@ -171,7 +188,11 @@ const expected: Partial<Record<Name, Partial<Record<ChartState, ReturnType<typeo
   supply: Object.fromEntries([...underWay, 'starting', 'interrupted'].map((state) => [state, grave])),
   lease: { homing: interruption, moving: interruption },
   ready: { starting: always('homing') },
-  standstill: { holding: always('held'), stopping: always('stopped'), interrupted: always('holding') },
+  'ready, warning anew': { ...Object.fromEntries([...underWay, 'interrupted'].map((state) => [state, grave])), starting: always('homing') },
+  'ready, position lost': { moving: grave, standing: grave, interrupted: grave, starting: always('homing') },
+  disarmed: Object.fromEntries([...underWay, 'starting', 'interrupted'].map((state) => [state, always('holding')])),
+  // In `interrupted` the line is down: what counts is the standstill after it is ready.
+  standstill: { holding: always('held'), stopping: always('stopped') },
   stranger: { ...Object.fromEntries(underWay.map((state) => [state, interruption])), starting: always('failed') },
   foreign: { homing: always('holding'), moving: always('holding'), standing: always('holding') },
 };
@@ -189,6 +210,9 @@ const names: Name[] = [
   'restart',
   'database',
   'ready',
+  'ready, warning anew',
+  'ready, position lost',
+  'disarmed',
   'standstill',
   'stranger',
   'foreign',

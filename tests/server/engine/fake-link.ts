@@ -30,6 +30,7 @@ export class FakeLink implements TurntableLink {
   angleDeg: number | null = 0;
   interlockClosed = true;
   supplyPresent = true;
+  warningDue = false;
   refuseNext: { code: string; message: string } | null = null;
   /** Swallow commands without a word. */
   deaf = false;
@@ -70,6 +71,7 @@ export class FakeLink implements TurntableLink {
       supplyPresent: this.supplyPresent,
       armKey: true,
       driversOn: true,
+      warningDue: this.warningDue,
     };
   }
 

@@ -109,6 +109,25 @@ describe('interruptions', () => {
     }
   });
 
+  test('an interlock that was opened and closed while no server ran holds the run under resume, and the arm is void', async () => {
+    const bench = await underWay(30, runStart({ ...shortProtocol, onInterruption: 'resume' }));
+    bench.link.warningDue = true;
+    await bench.restart(5);
+    await bench.pass(200);
+    expect(bench.driver.facts()).toMatchObject({ state: 'held', reason: expect.stringContaining('interlock was opened') });
+    expect(bench.performed).toContainEqual(expect.objectContaining({ kind: 'void-arm', reason: 'the interlock was opened' }));
+    expect(bench.store.events.find(({ kind }) => kind === 'interlock')?.data).toEqual({ closed: false, unseen: true });
+  });
+
+  test('so does a supply that was lost meanwhile, and the position with it', async () => {
+    const bench = await underWay(30, runStart({ ...shortProtocol, onInterruption: 'resume' }));
+    bench.link.angleDeg = null;
+    await bench.restart(5);
+    await bench.pass(200);
+    expect(bench.driver.facts()).toMatchObject({ state: 'held', reason: expect.stringContaining('supply was lost') });
+    expect(bench.performed).toContainEqual(expect.objectContaining({ kind: 'void-arm' }));
+  });
+
   test('an interlock that opened while the link was down holds the run under resume', async () => {
     const bench = await underWay(30, runStart({ ...shortProtocol, onInterruption: 'resume' }));
     bench.link.drop(30_000);

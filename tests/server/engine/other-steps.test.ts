@@ -1,4 +1,6 @@
 import type { ProtocolDocument } from '@/shared/protocol/document';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import type { RigDocument, RigMotion } from '@/shared/rig/document';
 import { makeBench, runStart, sent, shortProtocol, startUtcMs, underWay } from './rig-bench';
 
 describe('other steps', () => {
@@ -51,13 +53,49 @@ describe('other steps', () => {
     expect(last?.path).toBe('3.repeat[4].4.dwell');
   });
 
-  test('at the end the sources turn to the station asked for, and the drivers are released only if asked', async () => {
+  test('at the end the sources turn to the station asked for, and the drivers are released only if asked, where that is safe', async () => {
     const keep = await underWay(200, runStart({ ...shortProtocol, atEnd: { station: 'clear' } }));
     expect(keep.store.log().at(-1)).toMatchObject({ path: 'atEnd.swing', station: 'clear', outcome: 'done', angleEndDeg: 90 });
     expect(sent(keep, 'stop')).toEqual([]);
-    const release = await underWay(200, runStart({ ...shortProtocol, atEnd: { drivers: 'release' } }));
+    const releasing: ProtocolDocument = { ...shortProtocol, atEnd: { drivers: 'release' } };
+    const rig: RigDocument = { ...demoRigWide, motion: { ...(demoRigWide.motion as RigMotion), safeWhenFree: true } };
+    const release = await underWay(200, runStart(releasing, { rig }));
     expect(sent(release, 'stop')).toEqual([expect.objectContaining({ releaseDrivers: true })]);
     expect(release.store.events.at(-1)).toMatchObject({ kind: 'finished', data: { drivers: 'release' } });
+    const unsafe = await underWay(200, runStart(releasing));
+    expect(sent(unsafe, 'stop')).toEqual([]);
+    expect(unsafe.store.events.at(-1)?.data).toMatchObject({ drivers: 'keep', driversWhy: expect.stringContaining('safeWhenFree') });
+  });
+
+  test('of two stations at one angle the log names the one that was asked for', async () => {
+    const bench = await underWay(
+      200,
+      runStart(steps({ kind: 'swing', to: 'across' }, { kind: 'dwell', for_s: 20 }, { kind: 'mark', label: 'x' })),
+    );
+    expect(
+      bench.store
+        .log()
+        .slice(2)
+        .map(({ station }) => station),
+    ).toEqual(['across', 'across', 'across']);
+  });
+
+  test('a wait that was held still ends at its time of day', async () => {
+    const bench = await underWay(60, runStart(steps({ kind: 'wait', until: { localTime: '23:05' } }, { kind: 'swing', to: 'far' })));
+    bench.driver.hold('Ben');
+    await bench.pass(100);
+    await bench.driver.resume('Ben');
+    const predicted = bench.driver.facts().predictedEndUtcMs ?? 0;
+    expect(predicted).toBeGreaterThan(startUtcMs + 300_000);
+    expect(predicted).toBeLessThan(startUtcMs + 320_000);
+    await bench.pass(400);
+    expect(
+      bench.store
+        .log()
+        .slice(2)
+        .map(({ kind, outcome }) => `${kind} ${outcome}`),
+    ).toEqual(['wait cut short', 'wait done', 'swing done']);
+    expect(bench.store.log()[3]?.endUtcMs).toBe(startUtcMs + 300_000);
   });
 
   test('a protocol that begins to swing without a known position fails with what to do', async () => {

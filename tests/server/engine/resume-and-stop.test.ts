@@ -118,3 +118,55 @@ describe('the arm ends while the run is under way', () => {
     expect(bench.driver.facts().state).toBe('finished');
   });
 });
+
+describe('somebody ends the arm while the run is under way', () => {
+  const moments = [
+    ['in homing', 0.02],
+    ['in a swing', 4],
+    ['in a dwell', 30],
+    ['while a move waits in the controller', 66.3],
+    ['in the swing after a dwell', 70],
+  ] as const;
+
+  test.each(moments)('%s: it is held, and nothing moves until the rig is armed again', async (_, seconds) => {
+    const bench = await underWay(seconds);
+    bench.arm.now = null;
+    // A loop that only waits looks up at its next deadline, or after 30 s.
+    await bench.pass(seconds === 30 ? 31 : 1);
+    const stoodAt = bench.link.nowDeg();
+    expect(bench.link.mayRenew()).toBe(false);
+    await bench.pass(200);
+    expect(bench.driver.facts()).toMatchObject({
+      state: 'held',
+      reason: 'The arm of Ada Quill was ended. Arm the rig again on site, then resume.',
+    });
+    expect(bench.link.nowDeg()).toBe(stoodAt);
+    expect((await bench.driver.resume('Ben')).ok).toBe(false);
+    bench.arm.now = { name: 'Cleo Marsh', untilUtcMs: startUtcMs + 7_200_000 };
+    expect((await bench.driver.resume('Ben')).ok).toBe(true);
+    await bench.pass(400);
+    expect(bench.driver.facts().state).toBe('finished');
+  });
+
+  test('a motion that was chosen in the same moment is not sent', async () => {
+    const bench = await underWay(66.3);
+    const ends = bench.driver.state().context.step?.row.plannedEndUtcMs ?? 0;
+    expect(ends).toBeGreaterThan(startUtcMs + 66_300);
+    bench.driver.hold('Ben');
+    await bench.pass(1);
+    await bench.driver.resume('Ben');
+    bench.arm.now = null;
+    const before = bench.link.motions.length;
+    await bench.pass(400);
+    expect(bench.link.motions).toHaveLength(before);
+    expect(bench.driver.facts().state).toBe('held');
+  });
+
+  test('a run that another process takes up after it is held', async () => {
+    const bench = await underWay(30, runStart({ ...shortProtocol, onInterruption: 'resume' }));
+    bench.arm.now = null;
+    await bench.restart(5);
+    await bench.pass(200);
+    expect(bench.driver.facts()).toMatchObject({ state: 'held', reason: expect.stringContaining('was ended') });
+  });
+});
