@@ -3,7 +3,7 @@ import { GScale } from '@/components/charts';
 import { Body, Icon, Label, Num, Panel } from '@/components/ui';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
-import { enWords, methodWords } from './evaluation-words';
+import { enWords, freedomWords, methodWords } from './evaluation-words';
 import { LargeG } from './uncertain-text';
 
 interface GPanelProps {
@@ -35,7 +35,7 @@ export function GPanel({ result, registered, trueG = null, heading }: GPanelProp
       <View className="gap-0.5">
         <Label>
           {relativeU === null ? 'no uncertainty' : `standard uncertainty in brackets, ${formatPercent(relativeU)} of G`}
-          {G.degreesOfFreedom === null ? '' : `, ${formatSignificant(G.degreesOfFreedom, 2)} degrees of freedom`}
+          {G.degreesOfFreedom === null ? '' : `, ${freedomWords(G.degreesOfFreedom)}`}
         </Label>
         {trueG === null ? <Label testID="en">{enWords(codata.En)}</Label> : <TrueG value={G.value} u={G.u} trueG={trueG} />}
       </View>
