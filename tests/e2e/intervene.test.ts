@@ -109,6 +109,10 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await lab().pass(15);
     await hand.reads('run-state', /Dwell, near side/);
     expect(await eventsOf(runId, 'resumed')).toHaveLength(1);
+    await lab().pass(330);
+    await hand.reads('time-left', /^0[78]:\d\d$/);
+    await hand.shoots('run-near');
+    if (size === 'phone') await hand.pictures('run');
   });
 
   chapter('hold after this dwell cuts nothing short', async () => {

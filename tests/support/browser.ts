@@ -9,6 +9,11 @@ export type Size = keyof typeof sizes;
 
 const screens = join(__dirname, '..', '..', 'test-output', 'screens');
 
+const pictures = join(__dirname, '..', '..', 'docs', 'screens');
+
+/** Whether this run makes the pictures of the documents anew. */
+export const keepsPictures = process.env.EVENFALL_KEEP_SCREENS === '1';
+
 const flags = [
   '--no-sandbox',
   '--disable-gpu',
@@ -68,4 +73,11 @@ export async function openBrowser(baseURL: string, size: Size): Promise<Browser>
 export async function shoot(browser: Browser, name: string): Promise<void> {
   mkdirSync(screens, { recursive: true });
   await browser.page.screenshot({ path: join(screens, `${name}-${browser.size}.png`) });
+}
+
+/** Makes a picture of the documents anew, where that is asked for: a usual run leaves the tree as it is. */
+export async function picture({ page }: Browser, name: string): Promise<void> {
+  if (!keepsPictures) return;
+  mkdirSync(pictures, { recursive: true });
+  await page.screenshot({ path: join(pictures, `${name}.png`) });
 }

@@ -1,5 +1,5 @@
 import type { Locator } from 'playwright-core';
-import { shoot, type Browser } from '../../support/browser';
+import { picture, shoot, type Browser } from '../../support/browser';
 
 /** How long a press that moves masses is kept: the 1.5 s that the page asks for, and a little. */
 const keptMs = 1650;
@@ -109,6 +109,14 @@ export class Hand {
 
   async isEnabled(testId: string): Promise<boolean> {
     return this.at(testId).isEnabled();
+  }
+
+  /** For the documents, in which a whole page may be shown that is longer than a screen. */
+  async pictures(name: string, heightPx?: number): Promise<void> {
+    const size = this.page.viewportSize();
+    if (heightPx !== undefined && size !== null) await this.page.setViewportSize({ ...size, height: heightPx });
+    await picture(this.browser, name);
+    if (size !== null) await this.page.setViewportSize(size);
   }
 
   async shoots(name: string): Promise<void> {
