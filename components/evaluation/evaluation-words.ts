@@ -12,7 +12,7 @@ export function enWords(En: number | null): string {
   return `En ${number} against CODATA 2022: ${Math.abs(En) <= 1 ? 'agrees' : 'disagrees'} at k = 2`;
 }
 
-/** Above a hundred the number tells nothing more: k = 2 is then right to a percent (GUM, table G.2). */
+/** Above a hundred the number tells nothing more: t for 95.45 % is then within 1.5 % of 2 (GUM, table G.2). */
 export const freedomWords = (degrees: number): string =>
   degrees > 100 ? 'more than 100 degrees of freedom' : `${formatSignificant(degrees, 2)} degrees of freedom`;
 
