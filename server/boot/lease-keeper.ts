@@ -29,6 +29,7 @@ export class LeaseKeeper {
   private readonly epochs = new Map<string, RigKey & { epoch: number }>();
   private cancel: Cancel = () => undefined;
   private closed = false;
+  private renewing: Promise<void> = Promise.resolve();
 
   constructor(private readonly parts: LeaseParts) {}
 
@@ -51,7 +52,7 @@ export class LeaseKeeper {
 
   renewRegularly(): void {
     this.cancel = this.parts.clock.after(this.parts.leaseMs / renewals, () => {
-      void this.renewAll().then(() => {
+      this.renewing = this.renewAll().then(() => {
         if (!this.closed) this.renewRegularly();
       });
     });
@@ -61,6 +62,8 @@ export class LeaseKeeper {
   async close(): Promise<void> {
     this.closed = true;
     this.cancel();
+    // A renewal that is still on its way would take again what is given back here.
+    await this.renewing;
     const { database, clock, holder } = this.parts;
     for (const { labId, rigId } of this.epochs.values())
       await giveRigLease(database.db, { labId, rigId, holder, nowUtcMs: clock.utcMs() }).catch(() => undefined);
