@@ -27,6 +27,7 @@ const seconds = (work: () => void) => {
   return (performance.now() - start) / 1000;
 };
 
+verifyChain(chainOf(10_000), sha256Hex);
 const points = [10_000, 100_000, 1_000_000].map((size) => {
   const events = chainOf(size);
   const cost = seconds(() => {
