@@ -43,12 +43,32 @@ export function motionFindings(document: ProtocolDocument, rig: RigDocument, sta
       message: 'The rig document has no motion section, so the protocol can be neither planned nor run on it. Add motion to the rig.',
     });
   }
+  if (rig.motion !== undefined) walk.findings.push(...rangeFindings(rig.motion));
   const last = afterList(document.steps, [{ angleDeg: start?.angleDeg ?? null, swingS: null }], { walk, prefix: '' });
   const station = document.atEnd?.station;
   if (station !== undefined) {
     for (const situation of last) checkSwing({ kind: 'swing', to: station }, situation, { walk, path: 'atEnd' });
   }
   return walk.findings;
+}
+
+/** What the turntable link can write: microsteps from home, and microsteps per s or s² (its specification, Grammar). */
+const greatestPosition = 9_999_999;
+const greatestRate = 99_999;
+
+function rangeFindings({ stepsPerDegree, minDeg, maxDeg, homeDeg, maxSpeed_deg_s, maxAcceleration_deg_s2 }: RigMotion): Finding[] {
+  const rows: [string, number, number][] = [
+    ['motion.maxSpeed_deg_s', maxSpeed_deg_s * stepsPerDegree, greatestRate],
+    ['motion.maxAcceleration_deg_s2', maxAcceleration_deg_s2 * stepsPerDegree, greatestRate],
+    ['motion.minDeg to motion.maxDeg', Math.max(Math.abs(minDeg - homeDeg), Math.abs(maxDeg - homeDeg)) * stepsPerDegree, greatestPosition],
+  ];
+  return rows
+    .filter(([, steps, greatest]) => steps > greatest)
+    .map(([name, steps, greatest]) => ({
+      code: 'motion-out-of-range',
+      path: null,
+      message: `${name} of the rig comes to ${steps.toPrecision(3)} microsteps (per s or s²), more than the link to a controller can carry. Accepted is up to ${greatest}: lower it, or motion.stepsPerDegree.`,
+    }));
 }
 
 function afterList(steps: readonly Step[], situations: Situation[], { walk, prefix }: { walk: Walk; prefix: string }): Situation[] {

@@ -49,9 +49,9 @@ export function swingMove(
   return { ...target, speedDegS, accelerationDegS2, durationS };
 }
 
-/** Home speed, deg/s: `motion.homeSpeed_deg_s`, or a tenth of the greatest speed. */
+/** Home speed, deg/s: `motion.homeSpeed_deg_s`, or a tenth of the greatest speed; never above that. */
 export function homeSpeedDegS(motion: RigMotion): number {
-  return motion.homeSpeed_deg_s ?? motion.maxSpeed_deg_s / 10;
+  return Math.min(motion.homeSpeed_deg_s ?? motion.maxSpeed_deg_s / 10, motion.maxSpeed_deg_s);
 }
 
 /** Before it settles on the edge the controller goes this many microsteps below it, so that the zero is always met from the same side. */

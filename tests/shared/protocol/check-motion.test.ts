@@ -154,6 +154,16 @@ describe('motion', () => {
     expect(findings[0]?.message).toContain('up to 6 deg/s');
   });
 
+  test('a drive too fine for the link to its controller is refused', () => {
+    expect(places([home, near], withMotion({ stepsPerDegree: 16_000 }))).toEqual([]);
+    const [finding] = check([home, near], withMotion({ stepsPerDegree: 20_000 }));
+    expect(finding).toMatchObject({ code: 'motion-out-of-range', path: null });
+    expect(finding?.message).toContain('motion.maxSpeed_deg_s');
+    expect(places([home], withMotion({ stepsPerDegree: 60_000, maxSpeed_deg_s: 1, maxAcceleration_deg_s2: 1 }))).toEqual([
+      'motion-out-of-range null',
+    ]);
+  });
+
   test('a rig without motion cannot run a protocol', () => {
     expect(places([home, near], { ...demoRigWide, motion: undefined })).toEqual(['motion-missing null']);
   });
