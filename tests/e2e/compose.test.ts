@@ -56,19 +56,18 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     expect(await hand.reads('step-4')).toContain('Repeat');
     await hand.taps('duplicate');
     await hand.at('step-5').waitFor();
-    const doubled = await hand.reads('total-time', /\d/);
-    expect(doubled).not.toBe(added);
+    const doubled = await hand.readsOther('total-time', added);
     await hand.taps('delete');
     await hand.at('step-5').waitFor({ state: 'detached' });
     await hand.taps('undo');
     await hand.at('step-5').waitFor();
-    expect(await hand.reads('total-time')).toBe(doubled);
+    await hand.reads('total-time', doubled);
     await hand.taps('redo');
     await hand.at('step-5').waitFor({ state: 'detached' });
     // Up from behind a repeat is into its end.
     await hand.taps('move-up');
     await hand.reads('step-3.5.1', 'Settle');
-    expect(await hand.reads('total-time')).not.toBe(added);
+    await hand.readsOther('total-time', added);
     for (let times = 0; times < 5 && (await hand.isEnabled('undo')); times += 1) await hand.taps('undo');
     expect(await hand.reads('total-time', '2 h 48 min')).toBe('2 h 48 min');
     await hand.at('step-4').waitFor({ state: 'detached' });
@@ -81,7 +80,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.at('finding-cycle-pumps').waitFor();
     expect(await hand.reads('finding-cycle-pumps')).toMatch(/1\.50 periods, which is near an odd number of half periods.*beat_periods 2/);
     await hand.hears('swing-strip', /6 near dwells and 6 far dwells/);
-    expect(await hand.reads('total-time', /\d/)).not.toBe('2 h 48 min');
+    await hand.readsOther('total-time', '2 h 48 min');
     await hand.at('finding-cycle-pumps').scrollIntoViewIfNeeded();
     await hand.shoots('advice');
     await hand.taps('undo');

@@ -94,6 +94,19 @@ export class Hand {
     return last;
   }
 
+  /** Waits until an element says something else than before, and returns it. */
+  async readsOther(testId: string, before: string): Promise<string> {
+    let last = '';
+    await until(
+      async () => {
+        last = plain((await this.at(testId).textContent()) ?? '');
+        return last !== '' && last !== before;
+      },
+      () => `${testId} to say something else than "${before}"`,
+    );
+    return last;
+  }
+
   /** Waits until a picture in an element says something to those who do not see it, and returns it. */
   async hears(testId: string, words: RegExp): Promise<string> {
     let last = '';
