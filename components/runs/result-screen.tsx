@@ -48,7 +48,7 @@ export function ResultScreen({ view }: { view: RunView }) {
           trueG={view.simulated?.trueG ?? null}
         />
       )}
-      <Figures view={view} rows={rows} result={result} />
+      <Figures view={view} rows={steps.data?.data.items ?? null} result={result} />
       <Links runId={view.id} />
       <View className="flex-row flex-wrap items-center gap-3">
         <DownloadLink
@@ -129,15 +129,16 @@ function WholeNight({ view, rows, timeZone }: { view: RunView; rows: readonly St
   );
 }
 
-function Figures({ view, rows, result }: { view: RunView; rows: readonly StepRowView[]; result: EvaluationResult | null }) {
-  const dwells = rows.filter((row) => row.kind === 'dwell' && row.endUtcMs !== null);
+/** `rows` is null until the step log is there: no dwell is called bad before. */
+function Figures({ view, rows, result }: { view: RunView; rows: readonly StepRowView[] | null; result: EvaluationResult | null }) {
+  const dwells = (rows ?? []).filter((row) => row.kind === 'dwell' && row.endUtcMs !== null);
   const good = dwells.filter((row) => row.good !== false && row.outcome === 'done').length;
   const reversal = result?.reversal_rad ?? null;
   return (
     <Panel className="flex-row flex-wrap gap-x-10 gap-y-4" testID="figures">
       <View>
         <Num size={20}>
-          {good} of {view.dwellsPlanned}
+          {rows === null ? '–' : good} of {view.dwellsPlanned}
         </Num>
         <Label>good dwells</Label>
       </View>
