@@ -1,7 +1,6 @@
-import * as z from 'zod';
 import * as contracts from '@/shared/contracts/service';
 import { routes } from '@/shared/contracts';
-import { protocolDocumentSchema } from '@/shared/protocol/document';
+import { protocolJsonSchemaText } from '@/shared/protocol/json-schema';
 import { ping } from '@/server/store/health';
 import { isoOf } from '../maker';
 import { openApiOf } from '../openapi';
@@ -10,11 +9,7 @@ import { softwareVersion } from '../software';
 
 const openApi = JSON.stringify(openApiOf(routes, softwareVersion));
 
-const protocolSchema = JSON.stringify({
-  $id: '/api/schemas/protocol-1.json',
-  title: 'Evenfall protocol, format 1',
-  ...z.toJSONSchema(protocolDocumentSchema, { target: 'draft-2020-12', io: 'input' }),
-});
+const protocolSchema = protocolJsonSchemaText();
 
 export const serviceRoutes = [
   mount(contracts.getHealth, async ({ services }) => ({

@@ -1,3 +1,5 @@
+import { readFileSync } from 'node:fs';
+import { join } from 'node:path';
 import Ajv2020 from 'ajv/dist/2020';
 import addFormats from 'ajv-formats';
 import { routes } from '@/shared/contracts';
@@ -51,4 +53,6 @@ test('the schema of the protocol document takes the templates and refuses what t
   for (const template of templates) expect(validate(template.make(demoRigWide))).toBe(true);
   expect(validate({ formatVersion: 1, name: 'x', steps: [{ kind: 'leap' }] })).toBe(false);
   expect(validate({ formatVersion: 1, name: 'x', steps: [{ kind: 'home' }], colour: 'red' })).toBe(false);
+  expect(validate({ formatVersion: 1, name: 'x', steps: [{ kind: 'dwell', for_s: 60, periods: 2 }] })).toBe(false);
+  expect(body).toEqual(JSON.parse(readFileSync(join(__dirname, '../../../public/schemas/protocol-1.json'), 'utf8')));
 });
