@@ -25,7 +25,7 @@ const shortestDwell = { alone: 1.25, withRingDown: 0.9 };
 const equalLengths = 0.05;
 
 /**
- * Where a protocol that can be carried out is weak: `cycle-pumps`, `dwell-short`, `unequal-sides`, `drift-not-cancelled`, and what
+ * Where a protocol that can be carried out is weak: `cycle-pumps`, `dwell-short`, `unequal-sides`, `drift-not-cancelled`, `other-side`, and what
  * `adviseDocument` finds. Each message is two sentences, the number that triggered it and what would be better. Takes drafts; what cannot be told from them is left unsaid.
  */
 export function adviseProtocol(document: ProtocolDocument, rig: RigDocument, start: AdviceStart): Finding[] {
@@ -37,6 +37,7 @@ export function adviseProtocol(document: ProtocolDocument, rig: RigDocument, sta
     ...onePerStep(dwellShort(items, rig, hasRingDown)),
     ...unequalSides(sides),
     ...driftNotCancelled(sides),
+    ...onePerStep(otherSide(items, rig)),
     ...adviseDocument(document, rig),
   ]);
 }
@@ -158,4 +159,18 @@ function driftNotCancelled(dwells: readonly SideDwell[]): Finding[] {
   return advice(
     `With ${dwells.length} dwells there is no telling drift from signal. Plan at least 3 in alternation, such as near, far, near.`,
   );
+}
+
+/** Swings that reach a station from the side from which its angle was not measured: the backlash of the drive lies between the two. */
+function otherSide(items: readonly TimelineItem[], rig: RigDocument): Finding[] {
+  return items.flatMap((item) => {
+    const wanted = item.kind === 'swing' ? rig.stations[item.station]?.approach : undefined;
+    const wayDeg = item.angleToDeg - item.angleFromDeg;
+    if (wanted === undefined || wayDeg === 0 || (wanted === 'ccw') === wayDeg > 0) return [];
+    const [words, came] = wanted === 'ccw' ? ['counter-clockwise', 'clockwise'] : ['clockwise', 'counter-clockwise'];
+    const message =
+      `The station ${item.station} is meant to be reached ${words}, and this swing reaches it ${came}, so the backlash of the drive adds to its angle. ` +
+      'Swing past it first, or come from its other side.';
+    return [{ code: 'other-side', path: item.documentPath, message }];
+  });
 }

@@ -193,3 +193,16 @@ describe('what the document itself says', () => {
     expect(found({ ...releasing, atEnd: { drivers: 'keep' } })).toEqual([]);
   });
 });
+
+test('a swing that reaches a station from the side from which it is not meant to be reached', () => {
+  const near = { ...(demoRigWide.stations['near'] as RigDocument['stations'][string]), approach: 'ccw' as const };
+  const rig: RigDocument = { ...demoRigWide, stations: { ...demoRigWide.stations, near } };
+  const steps = (from: string): ProtocolDocument =>
+    document([{ kind: 'home' }, swing(from), dwell(900), { kind: 'repeat', times: 2, steps: [swing('near'), swing(from)] }]);
+  const found = (from: string) =>
+    adviseProtocol(steps(from), rig, { utcMs: 0, angleDeg: 0 })
+      .filter(({ code }) => code === 'other-side')
+      .map(({ path }) => path);
+  expect(found('far')).toEqual([]);
+  expect(found('clear')).toEqual(['4.repeat.1.swing']);
+});
