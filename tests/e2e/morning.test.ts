@@ -34,7 +34,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.at('result-screen').waitFor();
     expect(await hand.reads('headline', 'Finished at')).toMatch(/Finished at \d\d:\d\d/);
     expect(await hand.reads('headline')).toMatch(/Europe\/Zurich, after 56 min/);
-    expect(await hand.reads('figures', 'good dwells')).toMatch(/^4 of 4/);
+    await hand.reads('figures', /^4 of 4/);
     await hand.hears('night-strip', /2 near dwells and 2 far dwells.*4 of 4 dwells done.*The solid line is the measured deflection/);
     await hand.shoots('result');
   });
