@@ -153,18 +153,24 @@ export async function extremesOf(
   window: SampleWindow,
   intervals: number,
 ): Promise<{ utcMs: number[]; value: number[] }> {
-  const result = await connection.pool.query<{ ms: number; value: number }>(
-    `with part as materialized (
-       select at, value, coalesce(least($5::int - 1, floor(extract(epoch from at - $3::timestamptz) / nullif(extract(epoch from $4::timestamptz - $3::timestamptz), 0) * $5)::int), 0) as number
-       from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4),
-     bound as (select number, min(value) as low, max(value) as high from part group by number)
-     select (extract(epoch from min(part.at)) * 1000)::double precision as ms, part.value
-     from part join bound using (number)
-     where part.value = bound.low or part.value = bound.high
-     group by part.number, part.value order by 1`,
+  // One pass without a join: freshly stored samples have no statistics yet, and a join would be planned as one of every row with every part.
+  const result = await connection.pool.query<{ least: [number, number]; greatest: [number, number] }>(
+    `with part as (
+       select (extract(epoch from at) * 1000)::double precision as ms, value,
+         coalesce(least($5::int - 1, floor(extract(epoch from at - $3::timestamptz) / nullif(extract(epoch from $4::timestamptz - $3::timestamptz), 0) * $5)::int), 0) as number
+       from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4)
+     select min(array[value, ms]) as least, max(array[value, -ms]) as greatest from part group by number`,
     [...windowParameters(window), intervals],
   );
-  return { utcMs: result.rows.map((row) => row.ms), value: result.rows.map((row) => row.value) };
+  const found = result.rows.flatMap(({ least, greatest }) => {
+    const [low, high] = [
+      { ms: least[1], value: least[0] },
+      { ms: -greatest[1], value: greatest[0] },
+    ];
+    return low.ms === high.ms ? [low] : [low, high];
+  });
+  found.sort((one, other) => one.ms - other.ms);
+  return { utcMs: found.map(({ ms }) => ms), value: found.map(({ value }) => value) };
 }
 
 /** The last instant at which a channel has a sample, or null. */
