@@ -14,10 +14,10 @@ export function UncertainText({ size = 15, options, testID, ...quantity }: Uncer
   const small = size >= 30 ? 20 : size >= 20 ? 15 : 13;
   return (
     <Text role="img" aria-label={spokenUncertain(quantity, options)} testID={testID}>
-      <Num size={size} light={size >= 30}>
+      <Num size={size} light={size >= 30} className="whitespace-nowrap">
         {parts.value}
       </Num>
-      <Num size={size} light={size >= 30} tone="dim">
+      <Num size={size} light={size >= 30} tone="dim" className="whitespace-nowrap">
         {parts.uncertainty}
       </Num>
       <Body size={small} tone="dim">
