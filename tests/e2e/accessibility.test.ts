@@ -140,9 +140,8 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     for (const place of [...publicPlaces, ...places()]) {
       if (place.name === 'rigs') await lab().enter(hand.browser, 'owner');
       await visit(hand, place);
-      const all: string[] = [];
+      const all = size === 'phone' ? await narrow(hand, place) : [];
       for (const theme of themes) all.push(...(await findings(hand, theme)));
-      if (size === 'phone') all.push(...(await narrow(hand, place)));
       if (all.length > 0) found[place.name] = all;
     }
     expect(found).toEqual({});
