@@ -1,12 +1,30 @@
-import { lazy } from 'react';
+import { createElement, use, type ComponentType } from 'react';
+
+type Screens = typeof import('./screens');
+
+let loaded: Screens | null = null;
+let loading: Promise<Screens> | null = null;
 
 /**
  * Everything that only a signed-in person sees comes as one file of its own, so that signing in does not wait for it. One file for all, because
- * the bundler loads whatever two such files share with the very first page.
+ * the bundler loads whatever two such files share with the very first page. After a failure it is fetched anew.
  */
-export const fetchScreens = () => import('./screens');
+export function fetchScreens(): Promise<Screens> {
+  loading ??= import('./screens').then(
+    (screens) => (loaded = screens),
+    (error: unknown) => {
+      loading = null;
+      throw error;
+    },
+  );
+  return loading;
+}
 
-const screen = (name: keyof Awaited<ReturnType<typeof fetchScreens>>) => lazy(async () => ({ default: (await fetchScreens())[name] }));
+/** Drawn at once when the file is there: React holds back what had to wait, even for a moment, for 0.3 s. */
+const screen = (name: keyof Screens): ComponentType =>
+  function LoadedScreen() {
+    return createElement((loaded ?? use(fetchScreens()))[name]);
+  };
 
 export const DataScreen = screen('DataScreen');
 export const EditorScreen = screen('EditorScreen');
