@@ -4,9 +4,9 @@ import {
   GREATEST_NUMBER,
   hexNumberField,
   identifierField,
+  limitFields,
   placeField,
   positionField,
-  rateField,
   stampField,
   turnField,
   wholeField,
@@ -82,12 +82,6 @@ function decodeHi(fields: string[]): HiBody | undefined {
 }
 
 function decodeLimits(fields: string[]): LimitsBody | undefined {
-  const least = positionField(fields[6]);
-  const greatest = positionField(fields[7]);
-  const speed = rateField(fields[8]);
-  const acceleration = rateField(fields[9]);
-  const home = rateField(fields[10]);
-  if (least === undefined || greatest === undefined || speed === undefined || acceleration === undefined || home === undefined)
-    return undefined;
-  return { word: 'lim', least, greatest, speed, acceleration, home };
+  const limits = limitFields(fields, 6);
+  return limits === undefined ? undefined : { word: 'lim', ...limits };
 }

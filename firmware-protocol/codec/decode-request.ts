@@ -1,4 +1,14 @@
-import { choiceField, GREATEST_EPOCH, GREATEST_NUMBER, identifierField, positionField, rateField, stampField, wholeField } from './fields';
+import {
+  choiceField,
+  GREATEST_EPOCH,
+  GREATEST_NUMBER,
+  identifierField,
+  limitFields,
+  positionField,
+  rateField,
+  stampField,
+  wholeField,
+} from './fields';
 import type { Order, Request, UnusableRequest } from './messages';
 
 const FRAME_FIELDS = 5;
@@ -44,6 +54,13 @@ function decodeOrder(word: string, fields: string[]): Order | 'word' | 'field' {
     }
     case 'move':
       return decodeMove(fields, given);
+    case 'nudge': {
+      const tag = identifierField(fields[5]);
+      const steps = positionField(fields[6]);
+      return given === 2 && tag !== undefined && steps !== undefined ? { word, tag, steps } : 'field';
+    }
+    case 'teach':
+      return decodeTeach(fields, given);
     default:
       return 'word';
   }
@@ -53,6 +70,13 @@ function decodeHello(fields: string[], given: number): Order | 'field' {
   const major = wholeField(fields[5], GREATEST_VERSION);
   const minor = wholeField(fields[6], GREATEST_VERSION);
   return given === 2 && major !== undefined && minor !== undefined ? { word: 'hello', major, minor } : 'field';
+}
+
+/** SPEC 8.10: `least` lies below `greatest`, and `home` is not above `speed`. */
+function decodeTeach(fields: string[], given: number): Order | 'field' {
+  const limits = given === 5 ? limitFields(fields, 5) : undefined;
+  if (limits === undefined || limits.least >= limits.greatest || limits.home > limits.speed) return 'field';
+  return { word: 'teach', ...limits };
 }
 
 function decodeMove(fields: string[], given: number): Order | 'field' {

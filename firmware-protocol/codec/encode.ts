@@ -1,5 +1,5 @@
 import { crc16, hex4 } from './crc';
-import type { EventMessage, Happening, Message, Order, Reply, ReplyBody, Request } from './messages';
+import type { EventMessage, Happening, Limits, Message, Order, Reply, ReplyBody, Request } from './messages';
 
 /** The line of a message, check word and line feed included (SPEC 1.2). Values must lie in the ranges of SPEC 2. */
 export function encode(message: Message): string {
@@ -33,6 +33,10 @@ function orderText(order: Order): string {
       return `home ${order.tag}`;
     case 'move':
       return `move ${order.tag} ${order.position} ${order.speed} ${order.acceleration} ${order.beginUs === null ? 'now' : stamp(order.beginUs)}`;
+    case 'nudge':
+      return `nudge ${order.tag} ${order.steps}`;
+    case 'teach':
+      return `teach ${limitsText(order)}`;
     case 'stop':
       return `stop ${order.drivers}`;
     default:
@@ -45,6 +49,8 @@ function replyText(reply: Reply): string {
   return `r ${reply.session} ${reply.number} ${stamp(reply.receivedUs)} ${turn} ${bodyText(reply.body)}`;
 }
 
+const limitsText = ({ least, greatest, speed, acceleration, home }: Limits) => `${least} ${greatest} ${speed} ${acceleration} ${home}`;
+
 const place = (position: number | null) => (position === null ? 'none' : String(position));
 
 function bodyText(body: ReplyBody): string {
@@ -54,7 +60,7 @@ function bodyText(body: ReplyBody): string {
     case 'hi':
       return `hi ${body.major}.${body.minor} ${body.boot} ${body.session} ${body.resolutionUs} ${hex4(body.capabilities)} ${body.firmware}`;
     case 'lim':
-      return `lim ${body.least} ${body.greatest} ${body.speed} ${body.acceleration} ${body.home}`;
+      return `lim ${limitsText(body)}`;
     case 'no':
       return `no ${body.code} ${body.detail}`;
   }

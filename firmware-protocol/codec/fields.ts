@@ -1,3 +1,5 @@
+import { GREATEST_POSITION, GREATEST_RATE, type Limits } from './messages';
+
 /**
  * Readers of single fields (SPEC 2.1, 2.3). Each gives the value, or undefined for anything that is not exactly in
  * the form and range that the specification asks for.
@@ -33,8 +35,6 @@ export function wholeField(text: string | undefined, greatest: number): number |
 
 export const GREATEST_EPOCH = 4_294_967_295;
 export const GREATEST_NUMBER = 65_535;
-const GREATEST_POSITION = 9_999_999;
-const GREATEST_RATE = 99_999_999;
 
 export function positionField(text: string | undefined): number | undefined {
   if (text === undefined) return undefined;
@@ -52,6 +52,18 @@ export function placeField(text: string | undefined): number | null | undefined 
 export function rateField(text: string | undefined): number | undefined {
   const value = wholeField(text, GREATEST_RATE);
   return value === 0 ? undefined : value;
+}
+
+/** Five fields from `from` on: the travel limits, the caps and the home speed (SPEC 5.6). */
+export function limitFields(fields: readonly string[], from: number): Limits | undefined {
+  const least = positionField(fields[from]);
+  const greatest = positionField(fields[from + 1]);
+  const speed = rateField(fields[from + 2]);
+  const acceleration = rateField(fields[from + 3]);
+  const home = rateField(fields[from + 4]);
+  if (least === undefined || greatest === undefined || speed === undefined || acceleration === undefined || home === undefined)
+    return undefined;
+  return { least, greatest, speed, acceleration, home };
 }
 
 /** Exactly `length` hexadecimal digits in upper case, as they stand. */

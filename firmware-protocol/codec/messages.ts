@@ -3,6 +3,9 @@
 /** Longest line, line feed included (SPEC 1.2). */
 export const MAX_LINE_BYTES = 96;
 export const PROTOCOL_VERSION = { major: 1, minor: 0 } as const;
+/** SPEC 2.4. */
+export const GREATEST_POSITION = 9_999_999;
+export const GREATEST_RATE = 99_999_999;
 /** SPEC 3.2: no session. */
 export const NO_SESSION = '00000000';
 /** SPEC 10.1. */
@@ -25,6 +28,9 @@ export type Order =
   | { word: 'events'; from: number }
   | { word: 'home'; tag: string }
   | MoveOrder
+  /** `steps` from where the table stands (SPEC 8.9). */
+  | { word: 'nudge'; tag: string; steps: number }
+  | TeachOrder
   | { word: 'hold' }
   | { word: 'stop'; drivers: 'keep' | 'free' }
   | { word: 'off' };
@@ -37,6 +43,28 @@ export interface MoveOrder {
   acceleration: number;
   /** Controller time of the first step, microseconds since its start; null: now. */
   beginUs: number | null;
+}
+
+/** Limits that replace those of SPEC 5.6 for good (8.10). */
+export interface TeachOrder extends Limits {
+  word: 'teach';
+}
+
+/** SPEC 5.6: soft travel limits as positions, caps and home speed in thousandths of a microstep per s and s². */
+export interface Limits {
+  least: number;
+  greatest: number;
+  speed: number;
+  acceleration: number;
+  home: number;
+}
+
+/** SPEC 8.11: of a controller that was never taught. */
+export const UNTAUGHT_LIMITS: Limits = { least: -3600, greatest: 3600, speed: 200_000, acceleration: 200_000, home: 100_000 };
+
+/** SPEC 8.9: the longest nudge, a 36th of the soft travel, rounded up, microsteps. */
+export function longestNudge({ least, greatest }: Limits): number {
+  return Math.ceil((greatest - least) / 36);
 }
 
 export interface Request {
@@ -73,7 +101,7 @@ export const FLAG = {
 } as const;
 
 /** SPEC 5.5. */
-export const CAPABILITY = { homeFlag: 0x0001, interlock: 0x0002, supply: 0x0004, armKey: 0x0008, warning: 0x0010 } as const;
+export const CAPABILITY = { homeFlag: 0x0001, interlock: 0x0002, supply: 0x0004, armKey: 0x0008, warning: 0x0010, teach: 0x0020 } as const;
 
 export interface OkBody {
   word: 'ok';
@@ -96,13 +124,8 @@ export interface HiBody {
   firmware: string;
 }
 
-export interface LimitsBody {
+export interface LimitsBody extends Limits {
   word: 'lim';
-  least: number;
-  greatest: number;
-  speed: number;
-  acceleration: number;
-  home: number;
 }
 
 export interface NoBody {

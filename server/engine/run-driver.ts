@@ -305,7 +305,7 @@ export class RunDriver {
   private performEffect(effect: Effect): void {
     if (effect.kind !== 'link') return this.outside(() => this.parts.perform(effect));
     const { command } = effect;
-    const startsMotion = command.kind === 'home' || command.kind === 'move';
+    const startsMotion = command.kind !== 'hold' && command.kind !== 'stop';
     if (startsMotion && this.mayNotMove()) return;
     if (startsMotion) this.lastBeatMs = this.parts.clock.monotonicMs();
     this.parts.link.send(command);

@@ -41,10 +41,26 @@ export type LinkCommand =
       /** When the motion is to begin; null: at once. */
       startUtcMs: number | null;
     }
+  /** A small turn by `turnDeg` (positive: counter-clockwise) from where the table stands, for a person at the rig: the arm key must be on. */
+  | { kind: 'nudge'; id: string; turnDeg: number }
   /** Decelerate, keep torque, cancel a waiting move. */
   | { kind: 'hold'; id: string }
   /** Decelerate and end the session's motion; drivers released only where the rig is marked safe when free. */
   | { kind: 'stop'; id: string; releaseDrivers: boolean };
+
+/** Soft travel limits, caps and home speed as the controller itself keeps them. */
+export interface ControllerLimits {
+  leastDeg: number;
+  greatestDeg: number;
+  maxSpeedDegS: number;
+  maxAccelerationDegS2: number;
+  homeSpeedDegS: number;
+}
+
+/** What became of limits that the controller was to be taught. */
+export type TeachOutcome =
+  | { taught: true; /** as the controller has them now, rounded to its microsteps */ limits: ControllerLimits }
+  | { taught: false; code: string; message: string };
 
 export type MotionEndCause = 'done' | 'hold' | 'stop' | 'interlock' | 'supply' | 'lease' | 'limit' | 'reset';
 
@@ -88,6 +104,10 @@ export interface TurntableLink {
   close(): Promise<void>;
   health(): LinkHealth;
   controller(): ControllerState | null;
+  /** As the controller last told them; null before its first greeting. */
+  limits(): ControllerLimits | null;
+  /** Replaces the controller's limits for good. It must be at rest and its arm key on: a person is at the rig. Never rejects. */
+  teach(limits: ControllerLimits): Promise<TeachOutcome>;
   /** Sends a command at most once; the outcome comes as events. Hold and stop are repeated until confirmed. */
   send(command: LinkCommand): void;
   /** Asked before each heartbeat: may the motion lease be renewed? Answered by the run loop itself. */

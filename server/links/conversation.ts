@@ -9,8 +9,8 @@ import {
   type OkBody,
   type Order,
   type Reply,
+  type ReplyBody,
 } from '@/firmware-protocol/codec';
-import type { RigMotion } from '@/shared/rig/document';
 import type { Clock } from '../interfaces/clock';
 import type { ClockModel } from './clock-model';
 import type { CommandBook } from './command-book';
@@ -18,22 +18,24 @@ import type { CommandInput } from './command-life';
 import type { ControllerReport } from './controller-report';
 import { EventSequence } from './event-sequence';
 import type { Lease } from './lease';
+import type { LinkMetrics } from './link-metrics';
 import type { LinkTelling } from './link-telling';
-import { epochRefusal, limitsRemark, versionRefusal } from './link-words';
+import { epochRefusal, versionRefusal } from './link-words';
+import type { Teaching } from './teaching';
 import type { LiveRequest, Wire } from './wire';
 
 export interface ConversationSetting {
   clock: Clock;
-  rig: RigMotion;
-  byteTimeMs: number;
   wire: Wire;
   book: CommandBook;
   telling: LinkTelling;
   model: ClockModel;
+  metrics: LinkMetrics;
+  teaching: Teaching;
   lease: Lease;
   report: ControllerReport;
   /** Everything is known that is needed to drive: once for each line and each start of the controller. */
-  ready(remark: string | null, sameBoot: boolean): void;
+  ready(sameBoot: boolean): void;
   /** This controller cannot be driven. */
   refused(why: string): void;
 }
@@ -55,10 +57,10 @@ export class Conversation {
   hi: HiBody | null = null;
   /** The event that is being told. */
   event: EventMessage | null = null;
-  roundTripMs: number | null = null;
+  /** The controller's own limits, as told last. */
+  limits: LimitsBody | null = null;
   heartbeatDue = false;
   private readonly events = new EventSequence();
-  private remark: string | null = null;
   /** Events count from the first status of a boot on; what comes before belongs to somebody else. */
   private following = false;
   private announced = false;
@@ -96,7 +98,7 @@ export class Conversation {
     const request = wire.requestOf(reply);
     const { body } = reply;
     if (body.word === 'hi' && request !== null) this.meet(body);
-    if (request !== null) this.measure(request, reply, bytes);
+    if (request !== null) this.setting.metrics.measure(request, reply, bytes);
     if (body.word === 'ok' && reply.session === wire.session && this.following) {
       report.takeReply(reply, body);
       this.events.heardOf(body.event);
@@ -123,7 +125,9 @@ export class Conversation {
     const missing = this.events.missing;
     if (missing !== null && missing > this.rereadUpTo) return this.askAgain(missing);
     if (this.pumpMotion()) return;
-    if (this.heartbeatDue) this.askHeartbeat();
+    if (this.heartbeatDue) return this.askHeartbeat();
+    const lesson = this.setting.teaching.next();
+    if (lesson !== null) this.put(lesson, ({ body }) => this.heardLesson(body));
   }
 
   /** True when something was sent, or must be waited for, for the sake of a motion. */
@@ -218,8 +222,13 @@ export class Conversation {
   }
 
   private heardLimits(body: LimitsBody): void {
-    this.remark = limitsRemark(this.setting.rig, body);
+    this.limits = body;
     this.phase = 'status';
+  }
+
+  private heardLesson(body: ReplyBody): void {
+    if (body.word === 'lim') this.limits = body;
+    this.setting.teaching.heard(body);
   }
 
   private heardFirstStatus(reply: Reply, body: OkBody): void {
@@ -244,16 +253,6 @@ export class Conversation {
     if (code === 'repeat') return wire.input(request, { kind: 'ok' }, reply);
     if (code === 'old' || code === 'reused') return wire.input(request, { kind: 'cut-off' });
     wire.input(request, { kind: 'no' }, reply);
-  }
-
-  private measure(request: LiveRequest, { receivedUs, turnUs, body }: Reply, bytes: number): void {
-    const { clock, model, byteTimeMs } = this.setting;
-    // A stored reply has the stamps of the first receipt (SPEC 6.3).
-    if (request.sent === null || request.sent.attempts !== 1 || body.word === 'no') return;
-    const t4Ms = clock.monotonicMs();
-    this.roundTripMs = t4Ms - request.sent.atMs;
-    const outMs = request.sent.line.length * byteTimeMs;
-    model.add({ t1Ms: request.sent.atMs, t2Us: receivedUs, t3Us: receivedUs + turnUs, t4Ms, outMs, inMs: bytes * byteTimeMs });
   }
 
   /** Stamps go up within a start, and a start begins with event 1. */
@@ -290,7 +289,7 @@ export class Conversation {
     const sameBoot = this.bootBefore === this.hi?.boot;
     this.announced = true;
     this.bootBefore = this.hi?.boot ?? null;
-    this.setting.ready(this.remark, sameBoot);
+    this.setting.ready(sameBoot);
   }
 
   private input(request: LiveRequest, input: CommandInput, reply: Reply | null = null): void {

@@ -47,7 +47,12 @@ export class LinkConnection {
   ready(remark: string | null): void {
     this.failures = 0;
     this.condition = 'ready';
-    this.detail = remark ?? 'The controller answers.';
+    this.remark(remark);
+  }
+
+  /** What is to be said of a controller that answers; null: nothing. */
+  remark(words: string | null): void {
+    if (this.condition === 'ready') this.detail = words ?? 'The controller answers.';
   }
 
   /** The line is of no use (the caller has closed it): says why, and tries anew after a pause unless it is for good. */

@@ -2,16 +2,26 @@ import { decodeLine, type Order } from '@/firmware-protocol/codec';
 import type { RigMotion } from '@/shared/rig/document';
 import type { ByteLineFactory } from '../interfaces/byte-line';
 import type { Cancel, Clock } from '../interfaces/clock';
-import type { ControllerState, LinkCommand, LinkEvent, LinkHealth, TurntableLink } from '../interfaces/turntable-link';
+import type {
+  ControllerLimits,
+  ControllerState,
+  LinkCommand,
+  LinkEvent,
+  LinkHealth,
+  TeachOutcome,
+  TurntableLink,
+} from '../interfaces/turntable-link';
 import { ClockModel } from './clock-model';
 import { CommandBook } from './command-book';
 import { ControllerReport } from './controller-report';
 import { Conversation } from './conversation';
 import { Lease } from './lease';
 import { LinkConnection } from './link-connection';
+import { LinkMetrics } from './link-metrics';
 import { LinkTelling } from './link-telling';
-import { silence } from './link-words';
-import { milliStepsOf, stepsOfDeg } from './rig-units';
+import { limitsRemark, silence, teachRefusal } from './link-words';
+import { degOfLimits, limitsOfDeg, milliStepsOf, stepsOfDeg, stepsOfTurn } from './rig-units';
+import { Teaching } from './teaching';
 import { Wire } from './wire';
 
 export interface LinkOptions {
@@ -40,6 +50,8 @@ export function createLink(options: LinkOptions): TurntableLink {
 class LinkDriver implements TurntableLink {
   private readonly model = new ClockModel();
   private readonly lease = new Lease();
+  private readonly teaching = new Teaching();
+  private readonly metrics: LinkMetrics;
   private readonly report: ControllerReport;
   private readonly telling: LinkTelling;
   private readonly wire: Wire;
@@ -54,7 +66,8 @@ class LinkDriver implements TurntableLink {
 
   constructor(private readonly options: LinkOptions) {
     const { clock, rig, factory, epoch } = options;
-    const { model, lease } = this;
+    const { model, lease, teaching } = this;
+    const metrics = (this.metrics = new LinkMetrics(clock, model, factory.byteTimeMs ?? 0));
     const report = (this.report = new ControllerReport(rig));
     const telling = (this.telling = new LinkTelling({ clock, model, report, rig }));
     const wire = (this.wire = new Wire(clock, epoch, () => this.act(() => undefined)));
@@ -75,11 +88,10 @@ class LinkDriver implements TurntableLink {
       onLine: (line) => this.act(() => this.read(line)),
       onFailed: (why, forGood) => this.act(() => this.fail(forGood ? 'refused' : 'lost', why, forGood)),
     }));
-    const byteTimeMs = factory.byteTimeMs ?? 0;
     this.talk = new Conversation({
-      ...{ clock, rig, byteTimeMs, wire, book, telling, model, lease, report },
-      ready: (remark, sameBoot) => {
-        connection.ready(remark);
+      ...{ clock, wire, book, telling, model, metrics, teaching, lease, report },
+      ready: (sameBoot) => {
+        connection.ready(this.remark());
         const controller = this.controller();
         if (controller !== null) telling.tell({ kind: 'ready', at: telling.now(), controller, sameBoot });
       },
@@ -109,7 +121,7 @@ class LinkDriver implements TurntableLink {
       detail,
       reconnects,
       lastReplyUtcMs: this.lastReply.utcMs,
-      roundTripMs: this.talk.roundTripMs,
+      roundTripMs: this.metrics.roundTripMs,
       discardedLines: this.discardedLines,
       clockOffsetMs: offset?.ms ?? null,
       clockUS: offset === null ? null : offset.uMs / 1000,
@@ -119,6 +131,23 @@ class LinkDriver implements TurntableLink {
   controller(): ControllerState | null {
     const { hi } = this.talk;
     return hi === null ? null : this.report.view(hi.boot, hi.firmware);
+  }
+
+  limits(): ControllerLimits | null {
+    const { limits } = this.talk;
+    return limits === null ? null : degOfLimits(this.options.rig, limits);
+  }
+
+  async teach(limits: ControllerLimits): Promise<TeachOutcome> {
+    const { rig } = this.options;
+    const { condition, detail } = this.connection;
+    if (condition !== 'ready') return { taught: false, code: 'no-session', message: `there is no link to the controller: ${detail}` };
+    const answered = this.teaching.add(limitsOfDeg(rig, limits));
+    this.act(() => undefined);
+    const answer = await answered;
+    if (answer?.word !== 'lim') return { taught: false, ...teachRefusal(rig, answer) };
+    this.connection.remark(this.remark());
+    return { taught: true, limits: degOfLimits(rig, answer) };
   }
 
   setLeaseRule(mayRenew: () => boolean): void {
@@ -161,6 +190,8 @@ class LinkDriver implements TurntableLink {
     switch (command.kind) {
       case 'home':
         return { word: 'home', tag };
+      case 'nudge':
+        return { word: 'nudge', tag, steps: stepsOfTurn(rig, command.turnDeg) };
       case 'hold':
         return { word: 'hold' };
       case 'stop':
@@ -173,6 +204,11 @@ class LinkDriver implements TurntableLink {
         return { word: 'move', tag, position: stepsOfDeg(rig, targetDeg), speed, acceleration, beginUs };
       }
     }
+  }
+
+  private remark(): string | null {
+    const { limits } = this.talk;
+    return limits === null ? null : limitsRemark(this.options.rig, limits);
   }
 
   private read(line: string): void {
@@ -221,6 +257,7 @@ class LinkDriver implements TurntableLink {
 
   private async letGo(): Promise<void> {
     this.lease.end();
+    this.teaching.cutOff();
     const detached = this.wire.detach();
     this.book.each((entry) => this.wire.input(entry, { kind: 'cut-off' }));
     await detached;

@@ -76,7 +76,7 @@ export class LinkTelling {
       case 'accepted':
         return this.tell({ kind: 'accepted', at, commandId });
       case 'refused':
-        if (reply?.body.word === 'no') this.refused(commandId, reply.body.code, refusalMessage(rig, reply.body));
+        if (reply?.body.word === 'no') this.refused(commandId, reply.body.code, refusalMessage(rig, reply.body, entry.command.kind));
         return;
       case 'not-delivered':
         return this.refused(

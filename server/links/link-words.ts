@@ -1,6 +1,6 @@
 import { PROTOCOL_VERSION, refusalWords, type EndCause, type HiBody, type LimitsBody, type NoBody } from '@/firmware-protocol/codec';
 import type { RigMotion } from '@/shared/rig/document';
-import type { MotionEndCause } from '../interfaces/turntable-link';
+import type { LinkCommand, MotionEndCause } from '../interfaces/turntable-link';
 import { degOfSteps, limitsOf } from './rig-units';
 
 /** What the link says to people, and how the controller's words map to the engine's. */
@@ -22,14 +22,30 @@ export const END_CAUSE: Record<Exclude<EndCause, 'search'>, MotionEndCause> = {
 export const HOMING_GAVE_UP =
   'the whole travel was searched and the home flag never changed; check the flag, its sensor and its wiring, and that the turntable turns when the motor does';
 
-/** The limit that a refusal names, in degrees where it is a place. */
-export function refusalMessage(rig: RigMotion, { code, detail }: NoBody): string {
+/** The limit that a refusal names, in degrees where it is a place or, for a nudge, a way. */
+export function refusalMessage(rig: RigMotion, { code, detail }: NoBody, of: LinkCommand['kind']): string {
   const words = refusalWords(code);
+  if (code === 'travel' && of === 'nudge')
+    return `a nudge turns by ${(detail / rig.stepsPerDegree).toFixed(3)} deg at most, and not by nothing`;
   if (code === 'travel') return `${words}: ${degOfSteps(rig, detail).toFixed(3)} deg`;
   if (code === 'speed') return `${words}: ${(detail / 1000 / rig.stepsPerDegree).toFixed(3)} deg/s`;
   if (code === 'ramp') return `${words}: ${(detail / 1000 / rig.stepsPerDegree).toFixed(3)} deg/s2`;
   if (code === 'past') return `${words}: ${detail} ms ago`;
   return words;
+}
+
+/** Why limits were not taken; `answer` null: the line failed or nothing came. */
+export function teachRefusal(rig: RigMotion, answer: NoBody | null): { code: string; message: string } {
+  if (answer === null)
+    return { code: 'no-answer', message: 'the controller did not answer; read its limits again to see whether it took the new ones' };
+  const { code, detail } = answer;
+  const most = (detail / 1000 / rig.stepsPerDegree).toFixed(3);
+  if (code === 'speed') return { code, message: `this controller turns no faster than ${most} deg/s` };
+  if (code === 'ramp') return { code, message: `this controller accelerates no more than ${most} deg/s2` };
+  if (code === 'field')
+    return { code, message: 'the least limit must lie below the greatest, and the home speed must not be above the greatest speed' };
+  if (code === 'word') return { code, message: "this controller's firmware cannot be taught limits; they are set when it is flashed" };
+  return { code, message: refusalWords(code) };
 }
 
 /** Null when this version can drive the controller. */

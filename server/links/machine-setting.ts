@@ -1,8 +1,8 @@
-import type { LimitsBody } from '@/firmware-protocol/codec';
+import type { Limits } from '@/firmware-protocol/codec';
 
 /** What a simulated controller is when it is made. */
 export interface MachineSetting {
-  limits: Omit<LimitsBody, 'word'>;
+  limits: Limits;
   /** True position at the start, microsteps from the home edge. */
   startSteps: number;
   homed: boolean;

@@ -1,4 +1,4 @@
-import { PROTOCOL_VERSION, type BootCause } from '@/firmware-protocol/codec';
+import { PROTOCOL_VERSION, UNTAUGHT_LIMITS, type BootCause } from '@/firmware-protocol/codec';
 import type { RigMotion } from '@/shared/rig/document';
 import type { ByteLineFactory } from '../interfaces/byte-line';
 import type { Cancel, Clock } from '../interfaces/clock';
@@ -23,6 +23,8 @@ export interface SimulatedControllerOptions {
   uptimeS?: number;
   /** Line rate, bit/s; default 115200. */
   baudRate?: number;
+  /** Whether it was taught the rig's limits before; default true. Otherwise it has those of SPEC 8.11. */
+  taught?: boolean;
   version?: { major: number; minor: number };
 }
 
@@ -66,7 +68,7 @@ export function createSimulatedController(options: SimulatedControllerOptions): 
   const msAt = (us: number) => bornMs + us / usPerMs;
   const nowUs = () => usAt(clock.monotonicMs());
   const setting = {
-    limits: limitsOf(rig),
+    limits: options.taught === false ? UNTAUGHT_LIMITS : limitsOf(rig),
     startSteps: stepsOfDeg(rig, options.startDeg ?? rig.homeDeg),
     homed: options.homed ?? true,
     warned: options.warned ?? true,

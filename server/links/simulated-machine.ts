@@ -1,39 +1,32 @@
 import {
-  CAPABILITY,
   decodeLine,
-  encode,
-  EVENTS_AT_ONCE,
-  hex8,
   LEASE_MS,
   NO_SESSION,
   WARNING_MS,
   type BootCause,
   type EndCause,
   type Happening,
-  type MoveOrder,
+  type Limits,
   type NoBody,
   type OkBody,
   type Order,
   type ReplyBody,
   type Request,
+  type TeachOrder,
   type UnusableRequest,
 } from '@/firmware-protocol/codec';
 import type { MachineSetting } from './machine-setting';
-import { EventRing } from './simulated-events';
 import { SimulatedMotion } from './simulated-motion';
-import { no, refusalOf } from './simulated-refusals';
-import { okBody, type MachineFacts } from './simulated-report';
+import { no, refusalOf, teachRefusal, type MotionOrder } from './simulated-refusals';
+import { hiBody, okBody, type MachineFacts } from './simulated-report';
 import { SessionDesk } from './simulated-session';
+import { SimulatedStart } from './simulated-start';
+import { SimulatedVoice } from './simulated-voice';
 
 type StopOrder = Extract<Order, { word: 'hold' | 'stop' | 'off' }>;
-type MotionOrder = MoveOrder | { word: 'home'; tag: string };
 type SessionOrder = Exclude<Order, StopOrder | { word: 'ident' | 'hello' }>;
 
-const RESOLUTION_US = 4;
-const TURN_US = 92;
-const BOOT_US = 1_000_000;
 const MS = 1000;
-const EVERYTHING = Object.values(CAPABILITY).reduce((sum, bit) => sum | bit, 0);
 
 /**
  * The controller of SPEC.md as a machine without a clock: it is told what arrives when, and tells what it sends when.
@@ -43,11 +36,10 @@ export class SimulatedMachine {
   readonly motion: SimulatedMotion;
   private readonly inputs = { interlock: true, supply: true, key: true };
   private readonly desk = new SessionDesk();
-  private readonly ring = new EventRing();
-  private bootCount: number;
-  private bootUs: number;
-  private startsAtUs = -Infinity;
-  private booting: BootCause | null = null;
+  private readonly start: SimulatedStart;
+  private readonly voice: SimulatedVoice;
+  /** In non-volatile memory: a reset does not change them (SPEC 8.10). */
+  private readonly limits: Limits;
   private motionEnded = false;
   private warningDue: boolean;
   private freeDriversAtRest = false;
@@ -58,32 +50,33 @@ export class SimulatedMachine {
   /** `send`: one line, line feed included, that the controller begins to send at `atUs`. */
   constructor(
     private readonly setting: MachineSetting,
-    private readonly send: (line: string, atUs: number) => void,
+    send: (line: string, atUs: number) => void,
   ) {
-    this.bootCount = setting.bootCount;
-    this.bootUs = -setting.uptimeUs;
+    this.start = new SimulatedStart(setting.bootCount, setting.uptimeUs);
+    this.voice = new SimulatedVoice(this.start, send);
+    this.limits = { ...setting.limits };
     this.warningDue = !setting.warned;
     const emit = (what: Happening, atUs: number) => this.happen(what, atUs);
     this.motion = new SimulatedMotion({
-      limits: setting.limits,
+      limits: this.limits,
       startSteps: setting.startSteps,
       homed: setting.homed,
       emit,
       hindrance: () => this.hindrance(),
     });
-    this.ring.note({ word: 'boot', cause: 'power' }, 0);
+    this.voice.ring.note({ word: 'boot', cause: 'power' }, 0);
   }
 
   /** When something happens next without anything arriving. */
   nextDueUs(): number {
-    return this.booting === null ? Math.min(this.motion.nextDueUs(), this.leaseDueUs()) : this.startsAtUs;
+    return this.start.doneUs ?? Math.min(this.motion.nextDueUs(), this.leaseDueUs());
   }
 
   /** Lets everything happen that is due up to `us`, each at its own time. */
   runTo(us: number): void {
     for (let due = this.nextDueUs(); due <= us; due = this.nextDueUs()) {
       this.nowUs = Math.max(this.nowUs, due);
-      if (this.booting !== null) this.start(this.booting);
+      if (this.start.doneUs !== null) this.finishStart();
       else if (this.leaseDueUs() <= this.motion.nextDueUs()) this.lapse();
       else this.motion.runNext();
     }
@@ -93,7 +86,7 @@ export class SimulatedMachine {
   /** A line whose line feed arrives at `us`. */
   receive(line: string, us: number): void {
     this.runTo(us);
-    if (this.booting !== null) return;
+    if (this.start.doneUs !== null) return;
     const item = decodeLine(line);
     if (item.kind === 'request') this.obey(item, line);
     else if (item.kind === 'unusable') this.answerSession(item, line, () => no(item.code));
@@ -105,36 +98,34 @@ export class SimulatedMachine {
     this.runTo(us);
     const changed = on !== this.inputs[input];
     this.inputs[input] = on;
-    if (this.booting !== null || !changed) return;
+    if (this.start.doneUs !== null || !changed) return;
     if (input === 'key') return this.happen({ word: 'key', on }, us);
     this.happen(input === 'interlock' ? { word: 'interlock', closed: on } : { word: 'supply', present: on }, us);
     if (on) return;
     if (input === 'supply') return this.motion.cutOff(us, 'supply');
     this.leaseUntilUs = us;
     this.warningDue = true;
-    this.motion.brake(us, 'interlock', this.setting.limits.acceleration);
+    this.motion.brake(us, 'interlock', this.limits.acceleration);
   }
 
   /** The controller restarts; it hears nothing until it has started again. */
   reset(us: number, cause: BootCause): void {
     this.runTo(us);
     this.motion.forget(us);
-    this.startsAtUs = us + BOOT_US;
-    this.booting = cause;
+    this.start.begin(us, cause);
     this.desk.forget();
-    this.ring.clear();
+    this.voice.ring.clear();
     this.leaseUntilUs = -Infinity;
     this.freeDriversAtRest = false;
   }
 
-  private start(cause: BootCause): void {
-    this.bootUs = this.startsAtUs;
-    this.booting = null;
-    this.bootCount += 1;
+  private finishStart(): void {
+    const started = this.start.finish();
+    if (started === null) return;
     this.dropped = 0;
     this.motionEnded = false;
     this.warningDue = true;
-    this.happen({ word: 'boot', cause }, this.bootUs);
+    this.happen({ word: 'boot', cause: started.cause }, started.atUs);
   }
 
   /** When the lease will lapse in a way that matters (SPEC 10.2). */
@@ -177,17 +168,18 @@ export class SimulatedMachine {
 
   private answerSession(request: Request | UnusableRequest, line: string, carryOut: () => ReplyBody): void {
     const admission = this.desk.admit(request, line);
-    if (admission.kind === 'repetition') return this.send(admission.reply, this.nowUs + TURN_US);
+    if (admission.kind === 'repetition') return this.voice.repeat(admission.reply, this.nowUs);
     if (admission.kind === 'refused') return void this.answer(request, admission.body);
     const body = carryOut();
     this.desk.keep(request, line, this.answer(request, body));
-    if (request.kind === 'request' && request.order.word === 'events' && body.word === 'ok') this.sendAgain(request.order.from);
+    if (request.kind === 'request' && request.order.word === 'events' && body.word === 'ok')
+      this.voice.sendAgain(request.order.from, this.nowUs);
   }
 
   /** SPEC 9.4: in every state, from everyone; only a true repetition does nothing. */
   private obeyStop(request: Request, order: StopOrder, line: string): void {
     const repetition = this.desk.repetition(request, line);
-    if (repetition?.kind === 'repetition') return this.send(repetition.reply, this.nowUs + TURN_US);
+    if (repetition?.kind === 'repetition') return this.voice.repeat(repetition.reply, this.nowUs);
     this.stop(order);
     this.desk.keep(request, line, this.answer(request, this.report()));
   }
@@ -199,7 +191,7 @@ export class SimulatedMachine {
     if (order.word === 'hold') return this.motion.brake(us, 'hold', null);
     this.motionEnded = true;
     if (order.drivers === 'free') this.freeDriversAtRest = true;
-    this.motion.brake(us, 'stop', this.setting.limits.acceleration);
+    this.motion.brake(us, 'stop', this.limits.acceleration);
     this.releaseAtRest();
   }
 
@@ -211,7 +203,7 @@ export class SimulatedMachine {
 
   private hello(epoch: number): ReplyBody {
     if (epoch > this.desk.highestEpoch) this.leaseUntilUs = this.nowUs;
-    const session = this.desk.open(epoch, this.bootCount);
+    const session = this.desk.open(epoch, this.start.count);
     if (session === null) return no('epoch', this.desk.highestEpoch);
     this.motionEnded = false;
     if (this.motion.state === 'waiting') this.motion.brake(this.nowUs, 'session', null);
@@ -219,8 +211,7 @@ export class SimulatedMachine {
   }
 
   private greeting(session: string): ReplyBody {
-    const { version, firmware } = this.setting;
-    return { word: 'hi', ...version, boot: hex8(this.bootCount), session, resolutionUs: RESOLUTION_US, capabilities: EVERYTHING, firmware };
+    return hiBody(this.setting, this.start.count, session);
   }
 
   private carryOut(order: SessionOrder): ReplyBody {
@@ -231,24 +222,36 @@ export class SimulatedMachine {
         this.leaseUntilUs = this.nowUs + LEASE_MS * MS;
         return this.report();
       case 'limits':
-        return { word: 'lim', ...this.setting.limits };
+        return { word: 'lim', ...this.limits };
       case 'events':
-        return order.from < this.ring.oldest || order.from > this.ring.newest ? no('gone', this.ring.oldest) : this.report();
+        return order.from < this.voice.ring.oldest || order.from > this.voice.ring.newest
+          ? no('gone', this.voice.ring.oldest)
+          : this.report();
+      case 'teach':
+        return this.teach(order);
       case 'home':
       case 'move':
+      case 'nudge':
         return this.refusal(order) ?? this.accept(order);
     }
   }
 
+  private teach(order: TeachOrder): ReplyBody {
+    const { least, greatest, speed, acceleration, home } = order;
+    const refusal = teachRefusal(order, this.facts());
+    if (refusal === null) Object.assign(this.limits, { least, greatest, speed, acceleration, home });
+    return refusal ?? { word: 'lim', ...this.limits };
+  }
+
   private refusal(order: MotionOrder): NoBody | null {
-    const aheadMs = order.word === 'move' && order.beginUs !== null ? (order.beginUs + this.bootUs - this.nowUs) / MS : null;
-    return refusalOf(order, { ...this.facts(), limits: this.setting.limits, lastTag: this.motion.lastTag, aheadMs });
+    const aheadMs = order.word === 'move' && order.beginUs !== null ? (this.start.usOf(order.beginUs) - this.nowUs) / MS : null;
+    return refusalOf(order, { ...this.facts(), limits: this.limits, lastTag: this.motion.lastTag, aheadMs });
   }
 
   private accept(order: MotionOrder): ReplyBody {
     if (this.warningDue) this.happen({ word: 'warn', tag: order.tag }, this.nowUs);
     const soonestUs = this.nowUs + (this.warningDue ? WARNING_MS * MS : 0);
-    const beginUs = order.word === 'move' && order.beginUs !== null ? order.beginUs + this.bootUs : soonestUs;
+    const beginUs = order.word === 'move' && order.beginUs !== null ? this.start.usOf(order.beginUs) : soonestUs;
     this.motion.accept(order, beginUs);
     if (beginUs <= this.nowUs) this.motion.runNext();
     return this.report();
@@ -272,29 +275,18 @@ export class SimulatedMachine {
       leaseLive: this.leaseLive(),
       motionEnded: this.motionEnded,
       warningDue: this.warningDue,
-      event: this.ring.newest,
+      event: this.voice.ring.newest,
       dropped: this.dropped,
     };
   }
 
-  /** Sends a reply and gives its line. */
-  private answer({ session, number }: { session: string; number: number }, body: ReplyBody): string {
-    const reply = encode({ kind: 'reply', session, number, receivedUs: this.stampUs(this.nowUs), turnUs: TURN_US, body });
-    this.send(reply, this.nowUs + TURN_US);
-    return reply;
-  }
-
-  private stampUs(us: number): number {
-    return Math.max(0, Math.round(us - this.bootUs));
+  private answer(request: Request | UnusableRequest, body: ReplyBody): string {
+    return this.voice.answer(request, body, this.nowUs);
   }
 
   private happen(what: Happening, us: number): void {
     if (what.word === 'began') this.warningDue = false;
-    this.send(encode(this.ring.note(what, this.stampUs(us))), us);
+    this.voice.happen(what, us);
     if (what.word === 'ended') this.releaseAtRest();
-  }
-
-  private sendAgain(from: number): void {
-    for (const event of this.ring.from(from, EVENTS_AT_ONCE)) this.send(encode(event), this.nowUs + TURN_US);
   }
 }

@@ -1,8 +1,10 @@
-import type { EndCause, Happening, LimitsBody, MachineState, MoveOrder } from '@/firmware-protocol/codec';
+import type { EndCause, Happening, Limits, MachineState } from '@/firmware-protocol/codec';
+import type { MotionOrder } from './simulated-refusals';
 import { brakeStretches, rampStretches, reachedUs, Track, type Stretch } from './simulated-track';
 
 export interface MotionSetting {
-  limits: Omit<LimitsBody, 'word'>;
+  /** As they are now: teaching changes them. */
+  limits: Limits;
   /** True position at the start, microsteps from the home edge. */
   startSteps: number;
   homed: boolean;
@@ -11,9 +13,9 @@ export interface MotionSetting {
   hindrance: () => EndCause | null;
 }
 
-/** What the table is doing for one `home` or `move`. */
+/** What the table is doing for one order. */
 interface Active {
-  order: MoveOrder | { word: 'home'; tag: string };
+  order: MotionOrder;
   state: 'waiting' | 'moving' | 'homing' | 'braking';
   beginUs: number;
   /** Why it will have ended when the present leg is over. */
@@ -60,7 +62,7 @@ export class SimulatedMotion {
     return this.known ? this.steps(us) - this.zero : null;
   }
 
-  accept(order: Active['order'], beginUs: number): void {
+  accept(order: MotionOrder, beginUs: number): void {
     const { acceleration: cap } = this.setting.limits;
     const acceleration = (order.word === 'move' ? order.acceleration : cap) / MILLI;
     this.lastTag = order.tag;
@@ -148,6 +150,7 @@ export class SimulatedMotion {
     active.state = order.word === 'home' ? 'homing' : 'moving';
     this.setting.emit({ word: 'began', tag: order.tag, position: this.position(us) }, us);
     if (order.word === 'home') return this.search(active, us);
+    if (order.word === 'nudge') return this.setLeg(active, us, this.homeRamp(this.steps(us) + order.steps, us));
     this.setLeg(active, us, this.rampTo(order.position + this.zero, { speed: order.speed, acceleration: order.acceleration }, us));
   }
 

@@ -27,6 +27,15 @@ const order = fc.oneof(
   record({ ...just('events'), from: epoch }),
   record({ ...just('home'), tag: identifier }),
   record({ ...just('move'), tag: identifier, position, speed: rate, acceleration: rate, beginUs: fc.option(us) }),
+  record({ ...just('nudge'), tag: identifier, steps: position }),
+  record({
+    ...just('teach'),
+    least: fc.integer({ min: -9_999_999, max: -1 }),
+    greatest: fc.nat(9_999_999),
+    speed: fc.integer({ min: 50_000, max: 99_999_999 }),
+    acceleration: rate,
+    home: fc.integer({ min: 1, max: 50_000 }),
+  }),
   record({ ...just('stop'), drivers: fc.constantFrom('keep' as const, 'free' as const) }),
 );
 

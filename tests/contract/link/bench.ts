@@ -16,6 +16,7 @@ export interface LinkBench {
   drop(ms: number): Promise<void>;
   garbage(ms: number): Promise<void>;
   interlock(level: 'open' | 'closed'): Promise<void>;
+  armKey(level: 'on' | 'off'): Promise<void>;
   /** The port disappears, as a USB plug that is pulled; and comes back. */
   unplug(): Promise<void>;
   plug(): Promise<void>;
@@ -24,6 +25,8 @@ export interface LinkBench {
 
 export interface BenchMaker {
   name: string;
+  /** What the controller calls its firmware. */
+  firmware: string;
   /** A controller whose position is known and whose warning is over. */
   make(): Promise<LinkBench>;
   /** The same line with something else at its end. */

@@ -47,6 +47,7 @@ function benchOn(process: ControllerProcess): LinkBench {
     drop: (ms) => tell(`drop ${ms}`),
     garbage: (ms) => tell(`garbage ${ms}`),
     interlock: (level) => tell(`interlock ${level}`),
+    armKey: (level) => tell(`key ${level}`),
     unplug: () => process.unplug(),
     plug: () => process.plug(),
     dispose: async () => {
@@ -57,6 +58,7 @@ function benchOn(process: ControllerProcess): LinkBench {
 
 const maker: BenchMaker = {
   name: 'a pseudo-terminal',
+  firmware: 'simulated',
   // Half of the round trip of a busy machine, and a wall clock read to 1 ms.
   beginToleranceS: 0.1,
   noiseMs: 400,

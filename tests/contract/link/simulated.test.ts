@@ -28,6 +28,7 @@ function benchOn(clock: VirtualClock, options: { version?: { major: number; mino
     drop: async (ms) => controller.dropLine(ms),
     garbage: async (ms) => controller.garbage(ms),
     interlock: async (level) => (level === 'open' ? controller.openInterlock() : controller.closeInterlock()),
+    armKey: async (level) => controller.turnArmKey(level === 'on'),
     unplug: sync(controller.unplug),
     plug: sync(controller.plug),
     dispose: async () => undefined,
@@ -57,6 +58,7 @@ function babbler(clock: VirtualClock): ByteLineFactory {
 
 const maker: BenchMaker = {
   name: 'the simulated link',
+  firmware: 'simulated',
   beginToleranceS: 0.0002,
   noiseMs: 1_000,
   make: async () => benchOn(new VirtualClock(946_684_800_000, settle), {}),

@@ -1,10 +1,12 @@
 import type { Clock, Instant } from '@/server/interfaces/clock';
 import type {
+  ControllerLimits,
   ControllerState,
   LinkCommand,
   LinkEvent,
   LinkHealth,
   MotionEndCause,
+  TeachOutcome,
   TurntableLink,
 } from '@/server/interfaces/turntable-link';
 import { trapezoid } from '@/shared/physics/trapezoid';
@@ -75,6 +77,14 @@ export class FakeLink implements TurntableLink {
     };
   }
 
+  limits(): ControllerLimits | null {
+    return null;
+  }
+
+  async teach(limits: ControllerLimits): Promise<TeachOutcome> {
+    return { taught: true, limits };
+  }
+
   setLeaseRule(mayRenew: () => boolean): void {
     this.mayRenew = mayRenew;
   }
@@ -88,7 +98,7 @@ export class FakeLink implements TurntableLink {
     this.commands.push(command);
     if (this.deaf) return;
     if (command.kind === 'hold' || command.kind === 'stop') return this.halt(command);
-    if (!this.up) return;
+    if (!this.up || command.kind === 'nudge') return;
     this.clock.after(5, () => this.obey(command));
   }
 

@@ -1,0 +1,48 @@
+import type { ControllerLimits } from '@/server/interfaces/turntable-link';
+import type { BenchMaker } from './bench';
+import type { Scene } from './scene';
+
+/** What a person at the rig does with the arm key turned: nudges, and limits that are taught. */
+export function atTheRigConformance(maker: BenchMaker, scene: Scene): void {
+  test('turns by a nudge only while the arm key says that somebody is there, and never far', async () => {
+    await scene.begin();
+    await scene.watch.ready();
+    const before = await scene.bench.trueAngleDeg();
+    const turnDeg = before > 0 ? -1.5 : 1.5;
+    await scene.bench.armKey('off');
+    const keyOff = await scene.watch.get('refused', { of: scene.watch.send((id) => ({ kind: 'nudge', id, turnDeg })) });
+    expect(keyOff).toMatchObject({ code: 'key', message: expect.stringContaining('the arm key is off') });
+    await scene.bench.armKey('on');
+    const nudge = scene.watch.send((id) => ({ kind: 'nudge', id, turnDeg }));
+    const ended = await scene.watch.get('motion-ended', { of: nudge });
+    expect(ended.cause).toBe('done');
+    expect(ended.angleDeg).toBeCloseTo(before + turnDeg, 9);
+    expect(await scene.bench.trueAngleDeg()).toBeCloseTo(before + turnDeg, 9);
+    // A 36th of the travel of 340°, rounded up to a microstep (SPEC 8.9).
+    const far = await scene.watch.get('refused', {
+      of: scene.watch.send((id) => ({ kind: 'nudge', id, turnDeg: 9.46 })),
+    });
+    expect(far).toMatchObject({ code: 'travel', message: expect.stringContaining('9.450 deg at most') });
+    expect(scene.watch.all('motion-began')).toHaveLength(1);
+  });
+
+  test('is taught other limits by a person at the rig, obeys them, and keeps them over a reset', async () => {
+    await scene.begin();
+    await scene.watch.ready();
+    const wide = scene.watch.link.limits() as ControllerLimits;
+    expect(wide).toMatchObject({ leastDeg: -170, greatestDeg: 170, maxSpeedDegS: 30, maxAccelerationDegS2: 60, homeSpeedDegS: 10 });
+    const narrow = { leastDeg: -60.5, greatestDeg: 20, maxSpeedDegS: 12, maxAccelerationDegS2: 6, homeSpeedDegS: 5 };
+    await scene.bench.armKey('off');
+    expect(await scene.settled(scene.watch.link.teach(narrow))).toMatchObject({ taught: false, code: 'key' });
+    await scene.bench.armKey('on');
+    const wrongWay = await scene.settled(scene.watch.link.teach({ ...narrow, greatestDeg: -60.5 }));
+    expect(wrongWay).toMatchObject({ taught: false, code: 'field', message: expect.stringContaining('below the greatest') });
+    expect(scene.watch.link.limits()).toEqual(wide);
+    expect(await scene.settled(scene.watch.link.teach(narrow))).toEqual({ taught: true, limits: narrow });
+    expect((await scene.watch.get('refused', { of: scene.watch.move(20.01) })).message).toContain('20.000 deg');
+    await scene.bench.reset();
+    await scene.watch.get('ready', { nth: 1 });
+    expect(scene.watch.link.limits()).toEqual(narrow);
+    expect(await scene.settled(scene.watch.link.teach(wide))).toEqual({ taught: true, limits: wide });
+  });
+}
