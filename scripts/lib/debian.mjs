@@ -1,4 +1,4 @@
-import { accessSync, constants, readdirSync } from 'node:fs';
+import { accessSync, constants, existsSync, readdirSync } from 'node:fs';
 import { join } from 'node:path';
 import { must } from './run.mjs';
 import { giveUp, say, waiting } from './say.mjs';
@@ -42,6 +42,8 @@ const present = {
   postgresql: () => findPostgres() !== null && onPath('psql'),
   chromium: () => onPath('chromium'),
   socat: () => onPath('socat'),
+  'gcc-avr': () => onPath('avr-g++'),
+  'avr-libc': () => existsSync('/usr/lib/avr/include/avr/io.h'),
 };
 
 /** Makes sure that Debian's packages are there: installs them when root, else says the exact command and ends. */

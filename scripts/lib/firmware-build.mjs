@@ -1,0 +1,51 @@
+import { mkdirSync, readdirSync, rmSync } from 'node:fs';
+import { join } from 'node:path';
+import { outside, root } from './paths.mjs';
+import { must } from './run.mjs';
+
+export const firmwareFolder = join(root, 'firmware-protocol', 'firmware');
+export const boardImage = join(firmwareFolder, 'evenfall.hex');
+
+const COMMON = ['-std=c++14', '-Wall', '-Wextra', '-Werror', '-fno-exceptions', '-fno-rtti'];
+/** Size first: -Os; one program for the optimizer: -flto; no guard around what is made at the first use. */
+const BOARD = [
+  '-mmcu=atmega328p',
+  '-DF_CPU=16000000UL',
+  '-Os',
+  '-flto',
+  '-fwhole-program',
+  '-fno-threadsafe-statics',
+  '-frandom-seed=evenfall',
+];
+
+const sources = (...folders) =>
+  folders.flatMap((folder) =>
+    readdirSync(join(firmwareFolder, folder))
+      .filter((name) => name.endsWith('.cpp'))
+      .sort()
+      .map((name) => `${folder}/${name}`),
+  );
+
+/** An empty folder outside the project for what a build leaves. */
+function buildFolder(name) {
+  const folder = join(outside, `firmware-${name}`);
+  rmSync(folder, { recursive: true, force: true });
+  mkdirSync(folder, { recursive: true });
+  return folder;
+}
+
+/** Builds the image for the board. The same sources and the same compiler give the same bytes, wherever they lie. */
+export async function buildBoard() {
+  const folder = buildFolder('board');
+  const elf = join(folder, 'evenfall.elf');
+  const hex = join(folder, 'evenfall.hex');
+  await must('avr-g++', [...BOARD, ...COMMON, ...sources('core', 'board'), '-o', elf], { cwd: firmwareFolder });
+  await must('avr-objcopy', ['-O', 'ihex', '-R', '.eeprom', elf, hex]);
+  return { elf, hex };
+}
+
+/** Flash and static memory in bytes. */
+export async function sizesOf(elf) {
+  const [text, data, bss] = (await must('avr-size', [elf])).split('\n')[1].trim().split(/\s+/).map(Number);
+  return { flash: text + data, memory: data + bss };
+}
