@@ -1,9 +1,11 @@
 import { zodResolver } from '@hookform/resolvers/zod';
+import { useEffectEvent, useLayoutEffect, useState } from 'react';
 import { useForm } from 'react-hook-form';
 import { View } from 'react-native';
 import { call } from '@/components/api';
 import { Body, Button, FormField, showProblem } from '@/components/ui';
 import { signIn, type Me } from '@/shared/contracts/people';
+import { takeEarlyForm, type EarlyForm } from './early-form';
 
 interface CredentialsFormProps {
   /** Given when the person is known and only the session ended. */
@@ -13,7 +15,7 @@ interface CredentialsFormProps {
 
 /** E-mail and password; what was typed stays when the server refuses. */
 export function CredentialsForm({ email, onSignedIn }: CredentialsFormProps) {
-  const { control, handleSubmit, setError, formState } = useForm({
+  const { control, handleSubmit, setError, setFocus, setValue, formState } = useForm({
     resolver: zodResolver(signIn.body),
     defaultValues: { email: email ?? '', password: '' },
   });
@@ -25,6 +27,17 @@ export function CredentialsForm({ email, onSignedIn }: CredentialsFormProps) {
     }
   });
   const send = () => void submit();
+  const takeOver = useEffectEvent((early: EarlyForm) => {
+    const { email: typed, password } = early.values();
+    if (typed !== '') setValue('email', typed);
+    if (password !== '') setValue('password', password);
+    if (early.focused !== null) setFocus(early.focused);
+    if (early.pressed()) send();
+  });
+  const [early] = useState(takeEarlyForm);
+  useLayoutEffect(() => {
+    if (early !== null) takeOver(early);
+  }, [early]);
   return (
     <form
       className="contents"

@@ -3,11 +3,12 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { gzipSync } from 'node:zlib';
 import { chromium, type BrowserContext } from 'playwright-core';
+import { themeNames } from '@/components/theme/tokens';
 import { withDatabase } from './lib/fresh-database';
 import { ServerProcess } from './lib/server-process';
 import { report } from './report';
 
-/** First load of the sign-in page of the built application: bytes, and how it feels on a slow phone (1.6 Mbit/s, 150 ms, CPU 4×). */
+/** First load of the sign-in page of the built application: bytes, and how it feels on a slow phone (1.6 Mbit/s, 150 ms, CPU 4×) in the worst of the three themes. */
 
 interface Paint {
   lcpMs: number;
@@ -33,7 +34,7 @@ const openPhone = (profile: string): Promise<BrowserContext> =>
     hasTouch: true,
   });
 
-async function load(phone: BrowserContext, address: string): Promise<Loaded> {
+async function load(phone: BrowserContext, { address, theme }: { address: string; theme: string }): Promise<Loaded> {
   const page = await phone.newPage();
   const [scripts, fonts] = [new Set<string>(), new Set<string>()];
   page.on('response', (response) => {
@@ -51,14 +52,20 @@ async function load(phone: BrowserContext, address: string): Promise<Loaded> {
   });
   await client.send('Emulation.setCPUThrottlingRate', { rate: 4 });
   await page.addInitScript({
-    content: `globalThis.__paint = { lcpMs: 0, cls: 0 };
+    content: `localStorage.setItem('evenfall.theme', '${theme}');
+    globalThis.__paint = { lcpMs: 0, cls: 0 };
     new PerformanceObserver((list) => { for (const entry of list.getEntries()) __paint.lcpMs = entry.startTime; }).observe({ type: 'largest-contentful-paint', buffered: true });
     new PerformanceObserver((list) => { for (const entry of list.getEntries()) if (!entry.hadRecentInput) __paint.cls += entry.value; }).observe({ type: 'layout-shift', buffered: true });`,
   });
   await page.goto(`${address}/sign-in`);
-  await page.getByRole('button', { name: /sign in/i }).waitFor();
+  // The page is there before its program: what counts is read when the program has taken the form over, answers, and nothing more comes.
+  await page.locator('#root:not([data-early])').waitFor();
+  await page.getByTestId('sign-in').click();
+  await page.getByRole('alert').first().waitFor();
   await page.waitForLoadState('networkidle');
-  return { scripts, fonts, ...(await page.evaluate<Paint>('globalThis.__paint')) };
+  const paint = await page.evaluate<Paint>('globalThis.__paint');
+  await page.close();
+  return { scripts, fonts, ...paint };
 }
 
 const kib = (paths: Iterable<string>, packed: boolean) =>
@@ -67,14 +74,16 @@ const kib = (paths: Iterable<string>, packed: boolean) =>
     return sum + (packed ? gzipSync(bytes, { level: 9 }).length : bytes.length);
   }, 0) / 1024;
 
-function tell({ scripts, fonts, lcpMs, cls }: Loaded): void {
+function tell(loads: readonly Loaded[]): void {
+  const { scripts, fonts } = loads[0] as Loaded;
+  const worst = (paint: keyof Paint) => Math.max(...loads.map((load) => load[paint]));
   const all = readdirSync(join(dist, '_expo/static/js/web'))
     .filter((name) => name.endsWith('.js'))
     .map((name) => `_expo/static/js/web/${name}`);
   report({ name: 'web javascript', value: kib(scripts, true), unit: 'KiB gz', goal: 350, want: 'at most', peer: kib(all, true) });
   report({ name: 'web fonts', value: kib(fonts, false), unit: 'KiB', goal: 60, want: 'at most', peer: null });
-  report({ name: 'web largest-contentful-paint', value: lcpMs / 1000, unit: 's', goal: 2.5, want: 'at most', peer: null });
-  report({ name: 'web layout-shift', value: cls, unit: '1', goal: 0.02, want: 'at most', peer: null });
+  report({ name: 'web largest-contentful-paint', value: worst('lcpMs') / 1000, unit: 's', goal: 2.5, want: 'at most', peer: null });
+  report({ name: 'web layout-shift', value: worst('cls'), unit: '1', goal: 0.02, want: 'at most', peer: null });
 }
 
 async function run(): Promise<void> {
@@ -82,11 +91,16 @@ async function run(): Promise<void> {
   try {
     await withDatabase(async ({ url }) => {
       const server = await ServerProcess.start({ databaseUrl: url, stateDir: folder, env: { EVENFALL_WEB_DIR: 'dist' } });
-      const phone = await openPhone(join(folder, 'profile'));
       try {
-        tell(await load(phone, server.address));
+        const loads: Loaded[] = [];
+        for (const theme of themeNames) {
+          // A profile of its own each time: nothing is in its cache.
+          const phone = await openPhone(join(folder, theme));
+          loads.push(await load(phone, { address: server.address, theme }));
+          await phone.close();
+        }
+        tell(loads);
       } finally {
-        await phone.close();
         await server.end();
       }
     });

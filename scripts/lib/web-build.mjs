@@ -1,13 +1,16 @@
 import { createHash } from 'node:crypto';
 import { existsSync, mkdirSync, readFileSync, readdirSync, renameSync, rmSync, statSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
+import { writeFirstPage } from './first-page.mjs';
 import { root, state } from './paths.mjs';
 import { precompress } from './precompress.mjs';
 import { must } from './run.mjs';
 import { say, waiting } from './say.mjs';
 
 const config = ['app.json', 'babel.config.js', 'metro.config.js', 'tailwind.config.js', 'tsconfig.json', 'package-lock.json'];
-const builders = ['web-build.mjs', 'web-cuts.cjs', 'no-native-stack.cjs', 'precompress.mjs'].map((name) => join('scripts', 'lib', name));
+const builders = ['web-build.mjs', 'first-page.mjs', 'web-cuts.cjs', 'no-native-stack.cjs', 'precompress.mjs'].map((name) =>
+  join('scripts', 'lib', name),
+);
 const sources = ['app', 'components', 'shared', 'assets', 'public', 'global.css', ...config, ...builders];
 const stamp = join(state, 'web-build');
 
@@ -40,6 +43,7 @@ export async function ensureWebBuild() {
       env: { ...process.env, ...expoEnvironment },
     }),
   );
+  await writeFirstPage(fresh);
   await precompress(fresh);
   rmSync(join(root, 'dist'), { recursive: true, force: true });
   renameSync(fresh, join(root, 'dist'));

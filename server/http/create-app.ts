@@ -12,20 +12,21 @@ import type { MountedRoute } from './route-context';
 import { assertSameOrigin } from './same-origin';
 import { securityHeaders } from './security-headers';
 import type { Services } from './services';
-import { readIndexHtml, webFiles } from './web-files';
+import { readSessionToken } from './session-cookie';
+import { readWebPages, webFiles } from './web-files';
 
 /** The Express application: edge, routes of the contracts, web files, problems. */
 export function createApp(services: Services, routes: readonly MountedRoute[]): Express {
   const { config } = services;
   const app = express();
-  const indexHtml = readIndexHtml(config.webDir);
+  const pages = readWebPages(config.webDir);
   app.disable('x-powered-by');
   app.set('trust proxy', config.trustedProxies);
   app.set('query parser', 'simple');
-  app.use(logRequests(services), securityHeaders(config, indexHtml), compression({ filter: mayCompress }));
+  app.use(logRequests(services), securityHeaders(config, Object.values(pages)), compression({ filter: mayCompress }));
   app.use('/api', apiRouter(services, routes));
   app.use('/problems', problemPages());
-  app.use(webFiles(config.webDir, indexHtml));
+  app.use(webFiles(config.webDir, { pages, hasSession: (req) => readSessionToken(req, config) !== null }));
   app.use(answerProblems(services));
   return app;
 }

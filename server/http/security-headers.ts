@@ -11,15 +11,19 @@ function inlineTexts(html: string, element: 'style' | 'script'): string[] {
   return [...all].filter(([, attributes = '']) => !/\ssrc\s*=/i.test(attributes)).map(([, , text = '']) => text);
 }
 
+const hashesOf = (pages: readonly string[], element: 'style' | 'script') => [
+  ...new Set(pages.flatMap((page) => inlineTexts(page, element)).map(hashOf)),
+];
+
 /**
- * The content security policy for the built page: nothing inline but what the build itself wrote, by hash. The hash
+ * The content security policy for the built pages: nothing inline but what the build itself wrote, by hash. The hash
  * of the empty text lets react-native-web make its style element, which it then fills through the CSSOM.
  */
-function contentSecurityPolicy(indexHtml: string): Record<string, string[]> {
+function contentSecurityPolicy(pages: readonly string[]): Record<string, string[]> {
   return {
     'default-src': ["'self'"],
-    'script-src': ["'self'", ...inlineTexts(indexHtml, 'script').map(hashOf)],
-    'style-src': ["'self'", ...new Set(['', ...inlineTexts(indexHtml, 'style')].map(hashOf))],
+    'script-src': ["'self'", ...hashesOf(pages, 'script')],
+    'style-src': ["'self'", ...new Set([hashOf(''), ...hashesOf(pages, 'style')])],
     'img-src': ["'self'", 'data:', 'blob:'],
     'font-src': ["'self'"],
     'connect-src': ["'self'"],
@@ -32,10 +36,10 @@ function contentSecurityPolicy(indexHtml: string): Record<string, string[]> {
   };
 }
 
-export function securityHeaders(config: ServerConfig, indexHtml: string): RequestHandler {
+export function securityHeaders(config: ServerConfig, pages: readonly string[]): RequestHandler {
   const overTls = config.publicUrl?.startsWith('https:') ?? false;
   return helmet({
-    contentSecurityPolicy: { useDefaults: false, directives: contentSecurityPolicy(indexHtml) },
+    contentSecurityPolicy: { useDefaults: false, directives: contentSecurityPolicy(pages) },
     strictTransportSecurity: overTls ? { maxAge: 31_536_000, includeSubDomains: false } : false,
     referrerPolicy: { policy: 'no-referrer' },
     crossOriginEmbedderPolicy: false,

@@ -1,13 +1,25 @@
 import { existsSync, readdirSync, readFileSync } from 'node:fs';
 import { extname, join, sep } from 'node:path';
-import express, { Router, type RequestHandler, type Response } from 'express';
+import express, { Router, type Request, type RequestHandler, type Response } from 'express';
 
-/** The built single page, or a plain page that says what is missing. */
-export function readIndexHtml(webDir: string | null): string {
-  const file = webDir === null ? null : join(webDir, 'index.html');
-  if (file !== null && existsSync(file)) return readFileSync(file, 'utf8');
-  return '<!doctype html><html lang="en"><head><meta charset="utf-8"><title>Evenfall</title></head><body><p>The web application is not built yet. The API answers under /api.</p></body></html>';
+/** The pages of the web application: the one for every address, and the sign-in page as it stands before the program has come. */
+export interface WebPages {
+  index: string;
+  signIn: string;
 }
+
+/** The built pages, or a plain page that says what is missing. */
+export function readWebPages(webDir: string | null): WebPages {
+  const read = (name: string) => {
+    const file = webDir === null ? null : join(webDir, name);
+    return file !== null && existsSync(file) ? readFileSync(file, 'utf8') : null;
+  };
+  const index = read('index.html') ?? notBuilt;
+  return { index, signIn: read('sign-in.html') ?? index };
+}
+
+const notBuilt =
+  '<!doctype html><html lang="en"><head><meta charset="utf-8"><title>Evenfall</title></head><body><p>The web application is not built yet. The API answers under /api.</p></body></html>';
 
 const yearS = 31_536_000;
 
@@ -37,8 +49,11 @@ function preferPacked(webDir: string): RequestHandler {
   };
 }
 
-/** Files of the web application, and its one page for every other address. */
-export function webFiles(webDir: string | null, indexHtml: string): Router {
+/**
+ * Files of the web application, and its page for every other address. Who comes without a session is sent from the front door to the sign-in page
+ * at once, instead of by the program when it has come.
+ */
+export function webFiles(webDir: string | null, { pages, hasSession }: { pages: WebPages; hasSession: (req: Request) => boolean }): Router {
   const router = Router();
   if (webDir !== null) {
     router.use(preferPacked(webDir));
@@ -46,8 +61,13 @@ export function webFiles(webDir: string | null, indexHtml: string): Router {
       router.use(folder, express.static(join(webDir, folder), { fallthrough: false, index: false, redirect: false, setHeaders }));
     router.use(express.static(webDir, { index: false, redirect: false, setHeaders }));
   }
-  router.get('/{*rest}', (_req, res) => {
-    res.set('Cache-Control', 'no-cache').type('html').send(indexHtml);
+  router.get('/', (req, res, next) => {
+    if (hasSession(req)) next();
+    else res.set('Cache-Control', 'no-store').redirect(302, '/sign-in');
+  });
+  router.get('/{*rest}', (req, res) => {
+    const page = req.path === '/sign-in' ? pages.signIn : pages.index;
+    res.set('Cache-Control', 'no-cache').type('html').send(page);
   });
   return router;
 }

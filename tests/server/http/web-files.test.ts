@@ -3,7 +3,7 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { brotliCompressSync } from 'node:zlib';
 import compression from 'compression';
-import express from 'express';
+import express, { type Request } from 'express';
 import request from 'supertest';
 import { webFiles } from '@/server/http/web-files';
 
@@ -15,7 +15,9 @@ mkdirSync(join(folder, 'assets'));
 writeFileSync(join(folder, hashed), script);
 writeFileSync(join(folder, `${hashed}.br`), brotliCompressSync(script));
 writeFileSync(join(folder, 'theme.js'), 'document.title;');
-const app = express().use(compression(), webFiles(folder, '<!doctype html><title>Evenfall</title>'));
+const pages = { index: '<!doctype html><title>Evenfall</title>', signIn: '<!doctype html><title>Sign in</title>' };
+const hasSession = (req: Request) => req.headers.cookie === 'ef=somebody';
+const app = express().use(compression(), webFiles(folder, { pages, hasSession }));
 
 afterAll(() => rmSync(folder, { recursive: true, force: true }));
 
@@ -59,4 +61,16 @@ test('a packed file known by its tag is not sent again', async () => {
 
 test('a script of an earlier build is missing, not the page in its place', async () => {
   expect((await ask('/_expo/static/js/web/entry-ffffffffffffffffffffffffffffffff.js', 'br')).status).toBe(404);
+});
+
+test('the sign-in address answers with the page that stands before the program, every other with the one page', async () => {
+  expect((await ask('/sign-in?then=%2Fruns%2F17', 'br')).text).toBe(pages.signIn);
+  expect((await ask('/runs/17', 'br')).text).toBe(pages.index);
+});
+
+test('the front door sends who has no session to the sign-in page, and lets others in', async () => {
+  const stranger = await ask('/', 'br');
+  expect(stranger.status).toBe(302);
+  expect(stranger.headers).toMatchObject({ location: '/sign-in', 'cache-control': 'no-store' });
+  expect((await ask('/', 'br').set('Cookie', 'ef=somebody')).text).toBe(pages.index);
 });
