@@ -1,4 +1,4 @@
-import { readFile, readdir, writeFile } from 'node:fs/promises';
+import { readFile, writeFile } from 'node:fs/promises';
 import { join } from 'node:path';
 import { JSDOM, VirtualConsole } from 'jsdom';
 
@@ -51,10 +51,9 @@ function drawnRules(document) {
 /** Writes sign-in.html into the folder of a web build. */
 export async function writeFirstPage(folder) {
   const html = await readFile(join(folder, 'index.html'), 'utf8');
-  const scripts = join(folder, '_expo', 'static', 'js', 'web');
-  const entry = (await readdir(scripts)).find((name) => /^entry-\w+\.js$/.test(name));
-  if (entry === undefined) throw new Error(`no entry program in ${scripts}`);
-  const window = await draw(html, await readFile(join(scripts, entry), 'utf8'));
+  const entryPath = /<script src="([^"]*)" defer>/.exec(html)?.[1];
+  if (entryPath === undefined) throw new Error(`${folder}/index.html names no program`);
+  const window = await draw(html, await readFile(join(folder, entryPath), 'utf8'));
   const root = window.document.getElementById('root');
   // The content security policy lets no page bring styles on its elements; the program needs none here, and a browser test compares what is seen.
   for (const element of root.querySelectorAll('[style]')) element.removeAttribute('style');
@@ -66,7 +65,8 @@ export async function writeFirstPage(folder) {
     .replace(/<title>.*<\/title>/, () => `<title>${window.document.title}</title>`)
     // Before the style sheets, for a script that follows one waits for it.
     .replace(/<link rel="stylesheet"/, (first) => `${theme}\n    ${style}\n    ${first}`)
-    .replace(/<div id="root">[\s\S]*<\/div>/, () => `<div id="root" data-early="sign-in">${root.innerHTML}</div>\n  ${early}`);
+    .replace(/<div id="root">[\s\S]*<\/div>/, () => `<div id="root" data-early="${entryPath}">${root.innerHTML}</div>`)
+    .replace(/<script src="[^"]*" defer><\/script>/, () => early);
   await writeFile(join(folder, 'sign-in.html'), page);
   window.close();
 }
