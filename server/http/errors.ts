@@ -44,6 +44,9 @@ const awayCode = /^(ECONN\w+|EPIPE|ETIMEDOUT|ENOTFOUND|EAI_AGAIN|ENOENT|08\w{3}|
 const awayText =
   /Connection terminated|timeout exceeded when trying to connect|Client has encountered a connection error|Cannot use a pool after calling end/;
 
+/** PostgreSQL gave a statement up: it took longer than its time limit (57014), or waited too long for a lock (55P03). */
+const givenUpCode = /^(57014|55P03)$/;
+
 interface ErrorLike {
   code?: unknown;
   type?: unknown;
@@ -55,13 +58,16 @@ interface ErrorLike {
 }
 const isErrorLike = (value: unknown): value is ErrorLike => typeof value === 'object' && value !== null;
 
-/** Whether a failure means that the database is away, looking through the wrappers of drivers and mappers. */
-function isDatabaseAway(error: unknown): boolean {
+/** Whether a failure, or one inside the wrappers of drivers and mappers, is of a kind. */
+function isSomewhere(error: unknown, ofKind: (error: ErrorLike) => boolean): boolean {
   if (!isErrorLike(error)) return false;
-  if (typeof error.code === 'string' && awayCode.test(error.code) && !isFileError(error)) return true;
-  if (typeof error.message === 'string' && awayText.test(error.message)) return true;
-  return isDatabaseAway(error.cause) || (Array.isArray(error.errors) && error.errors.some(isDatabaseAway));
+  if (ofKind(error) || isSomewhere(error.cause, ofKind)) return true;
+  return Array.isArray(error.errors) && error.errors.some((inner) => isSomewhere(inner, ofKind));
 }
+
+const hasCode = (error: ErrorLike, codes: RegExp) => typeof error.code === 'string' && codes.test(error.code);
+const saysAway = (error: ErrorLike) =>
+  (hasCode(error, awayCode) && !isFileError(error)) || (typeof error.message === 'string' && awayText.test(error.message));
 
 const isFileError = (error: ErrorLike) => error.code === 'ENOENT' && error.syscall !== 'connect';
 
@@ -72,7 +78,12 @@ export function problemErrorOf(error: unknown): ProblemError {
   if (isErrorLike(error)) {
     const known = typeof error.type === 'string' ? bodyErrors[error.type] : undefined;
     if (known !== undefined) return known();
-    if (isDatabaseAway(error))
+    if (isSomewhere(error, (inner) => hasCode(inner, givenUpCode)))
+      return new ProblemError(
+        'database-away',
+        'The database took too long over this request, which was given up. Nothing was changed and nothing stored is lost; hold and stop still work. Try again, and if it happens again ask for less at once, for instance a shorter time.',
+      );
+    if (isSomewhere(error, saysAway))
       return new ProblemError(
         'database-away',
         'The database does not answer at the moment. Nothing was changed; hold and stop still work. Try again in a few seconds.',
