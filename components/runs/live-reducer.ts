@@ -78,7 +78,10 @@ function receive(before: LiveState, message: LiveMessage): LiveState {
   const state = { ...before, heardAtMs: message.receivedAtMs, stream: 'open' as const };
   switch (message.type) {
     case 'snapshot':
-      return { ...withView(state, message.data), rows: message.data.current ? mergeRows(state.rows, [message.data.current]) : state.rows };
+      return withCurrent(withView(state, message.data), message.data.current);
+    case 'progress':
+      // Every stream begins with a snapshot, so there is a view by now.
+      return state.view === null ? state : withCurrent(withView(state, { ...state.view, ...message.data }), message.data.current);
     case 'event':
       return withEvent(state, message.data);
     case 'step':
@@ -91,6 +94,9 @@ function receive(before: LiveState, message: LiveMessage): LiveState {
     }
   }
 }
+
+const withCurrent = (state: LiveState, current: StepRowView | null): LiveState =>
+  current === null ? state : { ...state, rows: mergeRows(state.rows, [current]) };
 
 /** A view that is older than what was seen is kept out: a slow answer must not turn the screen back. */
 function withView(state: LiveState, view: RunView): LiveState {

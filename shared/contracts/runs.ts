@@ -85,10 +85,29 @@ export const runViewSchema = runSummarySchema.extend({
 });
 export type RunView = z.infer<typeof runViewSchema>;
 
-/** Messages of the live stream of a run (server-sent events). `snapshot` and `event` carry the chain's seq as id. */
+/** What of a run's view changes while it goes on: all but what was settled when it was started, rig and protocol above all. */
+const runProgressSchema = runViewSchema.pick({
+  state: true,
+  startedAt: true,
+  endedAt: true,
+  predictedEndAt: true,
+  reason: true,
+  current: true,
+  deadlineAt: true,
+  dwellsDone: true,
+  dwellsPlanned: true,
+  holdAfterDwell: true,
+  intervention: true,
+  mayResume: true,
+  lastSeq: true,
+});
+
+/** Messages of the live stream of a run (server-sent events). `snapshot`, `progress` and `event` carry the chain's seq as id. */
 export const liveMessageSchemas = {
-  /** The whole view: first message, after each change, and wherever a gap could not be filled. */
+  /** The whole view: first message of every stream. */
   snapshot: runViewSchema,
+  /** After each change. */
+  progress: runProgressSchema,
   event: chainedEventSchema,
   step: stepRowViewSchema,
   samples: z.strictObject({

@@ -208,8 +208,18 @@ function encodeChange({ events, steps, view }: Omit<LiveChange, 'view'> & { view
   return [
     ...events.map((event) => encodeEvent('event', event, event.seq)),
     ...steps.map((step) => encodeEvent('step', step, null)),
-    view === null ? '' : encodeEvent('snapshot', view, view.lastSeq),
+    view === null ? '' : encodeEvent('progress', progressOf(view), view.lastSeq),
   ].join('');
+}
+
+/** Rig and protocol went out with the first snapshot: with every change they would be nine tenths of all that is sent. */
+function progressOf(view: RunView): LiveMessages['progress'] {
+  const { state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt } = view;
+  const { dwellsDone, dwellsPlanned, holdAfterDwell, intervention, mayResume, lastSeq } = view;
+  return {
+    ...{ state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt },
+    ...{ dwellsDone, dwellsPlanned, holdAfterDwell, intervention, mayResume, lastSeq },
+  };
 }
 
 /** The first call makes the value, later ones give it again. */

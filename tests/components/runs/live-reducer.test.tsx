@@ -23,6 +23,23 @@ describe('what arrives', () => {
     expect(state.seenSeq).toBe(40);
   });
 
+  test('progress moves what changes and keeps the rest; what was overtaken changes nothing', () => {
+    const { state, startedAt, endedAt, predictedEndAt, deadlineAt, dwellsDone, dwellsPlanned, holdAfterDwell, intervention, mayResume } =
+      viewAt(nowUtcMs);
+    const same = { startedAt, endedAt, predictedEndAt, deadlineAt, dwellsDone, dwellsPlanned, holdAfterDwell, intervention, mayResume };
+    const [, row] = rowsAt(nowUtcMs);
+    const progress = (lastSeq: number, change: Partial<{ state: 'held'; reason: string }>): LiveMessage => ({
+      type: 'progress',
+      receivedAtMs: 0,
+      data: { ...same, state, reason: '', current: row ?? null, lastSeq, ...change },
+    });
+    const first = receive(noLive, snapshot({ lastSeq: 40 }));
+    const held = receive(first, progress(42, { state: 'held', reason: 'The door is open.' }), progress(41, { reason: 'late' }));
+    expect(held.view).toEqual({ ...first.view, state: 'held', reason: 'The door is open.', current: row, lastSeq: 42 });
+    expect(held.rows).toContainEqual(row);
+    expect(held.seenSeq).toBe(42);
+  });
+
   test('a hole in the chain asks for the whole; loading it clears that', () => {
     const holed = receive(noLive, snapshot({ lastSeq: 10 }), event(11), event(14));
     expect(holed.missed).toBe(true);

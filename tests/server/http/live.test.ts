@@ -37,7 +37,9 @@ async function follow(runId: string, headers: Record<string, string> = {}, who: 
 
 const seqsOf = (reader: LiveReader) => reader.of('event').map(({ id }) => id);
 const range = (from: number, to: number) => Array.from({ length: Math.max(0, to - from + 1) }, (_, index) => from + index);
-const viewOf = (reader: LiveReader) => reader.of('snapshot').at(-1)?.data as RunView;
+/** The run as a page that reads this stream shows it: the snapshot, moved on by all progress. */
+const viewOf = (reader: LiveReader) =>
+  Object.assign({}, ...[...reader.of('snapshot'), ...reader.of('progress')].map(({ data }) => data)) as Partial<RunView>;
 
 test('begins with the whole, as an uncompressed stream that says how to come back', async () => {
   const runId = await lab.run(quickProtocol());
@@ -62,7 +64,7 @@ test('tells each event once with its number, the rows, the samples and a beat ea
   const from = (reader.of('snapshot')[0]?.data as RunView).lastSeq;
   await lab.until(runId, 'finished');
   await reader.until(() => viewOf(reader).state === 'finished');
-  expect(seqsOf(reader)).toEqual(range(from + 1, viewOf(reader).lastSeq));
+  expect(seqsOf(reader)).toEqual(range(from + 1, Number(viewOf(reader).lastSeq)));
   const rows = new Map(
     reader
       .of('step')
@@ -89,6 +91,18 @@ test('tells each event once with its number, the rows, the samples and a beat ea
   expect(reader.comments).toBeGreaterThan(2);
 });
 
+test('what a page puts together from one snapshot and the progress after it is what the run is; rig and protocol are sent once', async () => {
+  const runId = await lab.run(quickProtocol());
+  const reader = await follow(runId);
+  await reader.until(({ events }) => events.length > 0);
+  await lab.until(runId, 'finished');
+  await reader.until(() => viewOf(reader).state === 'finished');
+  expect(viewOf(reader)).toEqual(await lab.view(runId));
+  expect(reader.of('snapshot')).toHaveLength(1);
+  const progress = reader.of('progress').map(({ data }) => liveMessageSchemas.progress.parse(data));
+  expect(progress.length).toBeGreaterThan(10);
+});
+
 test('comes back after Last-Event-ID without losing or repeating anything, however often the line breaks', async () => {
   const runId = await lab.run(quickProtocol());
   const seen: number[] = [];
@@ -106,7 +120,7 @@ test('comes back after Last-Event-ID without losing or repeating anything, howev
     await reader.until(() => (reader.lastId() ?? 0) >= now);
     seen.push(...seqsOf(reader).map(Number));
     expect(seqsOf(reader)).toEqual(range(before + 1, now));
-    states.push(viewOf(reader).state);
+    states.push(String(viewOf(reader).state));
     lastId = reader.lastId();
     done = viewOf(reader).state === 'finished';
     reader.close();
@@ -126,7 +140,7 @@ test('comes back with the rows of the steps that ended meanwhile', async () => {
   reader.close();
   await lab.until(runId, 'finished');
   const again = await follow(runId, { 'last-event-id': String(lastId) });
-  await again.until(() => viewOf(again) !== undefined);
+  await again.until(() => viewOf(again).state === 'finished');
   expect(
     again
       .of('step')
