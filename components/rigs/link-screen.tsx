@@ -26,12 +26,12 @@ export function LinkScreen() {
   }
   return (
     <Screen title={`Link of ${rig.name}`} back={back} testID="link-screen">
-      <LinkChoice rig={rig} />
+      <LinkChoice rig={rig} etag={query.data?.etag ?? undefined} />
     </Screen>
   );
 }
 
-function LinkChoice({ rig }: { rig: RigView }) {
+function LinkChoice({ rig, etag }: { rig: RigView; etag: string | undefined }) {
   const router = useRouter();
   const toast = useToast();
   const refresh = useRefreshRigs();
@@ -76,7 +76,7 @@ function LinkChoice({ rig }: { rig: RigView }) {
         label="Use this link"
         busy={save.isPending}
         disabled={incomplete}
-        onPress={() => save.mutate({ params, body: link })}
+        onPress={() => save.mutate({ params, ifMatch: etag, body: link })}
         testID="save-link"
       />
     </>

@@ -1,6 +1,7 @@
 import { randomBytes, randomUUID } from 'node:crypto';
 import { join } from 'node:path';
 import type { Logger } from 'pino';
+import { GuidedMoves } from '../engine/guided-moves';
 import { RigSupervisor } from '../engine/rig-supervisor';
 import { sha256Hex } from '../evaluation/sha256';
 import type { RigStation, StationRig } from '../interfaces/rig-stations';
@@ -23,12 +24,13 @@ export interface RigSide {
   leases: LeaseKeeper;
   stations: ServerRigStations;
   supervisor: RigSupervisor;
+  guided: GuidedMoves;
 }
 
 /** All that has to do with the rigs: who may move them, their lines, and the engine that drives runs. */
 export function buildRigSide(
   parts: BuildParts,
-  { log, background, samples }: { log: Logger; background: Background; samples: SampleStore },
+  { log, background, samples, onLine }: { log: Logger; background: Background; samples: SampleStore; onLine(rigId: string): void },
 ): RigSide {
   const { database, clock, overrides = {} } = parts;
   const arms = new MemoryArmKeeper({ database, clock, log, sha256: sha256Hex, background: (work, what) => background.add(work, what) });
@@ -50,22 +52,33 @@ export function buildRigSide(
     apparatusOf: apparatusMaker(parts),
     onLinkEvent: heedLink,
   });
-  const supervisor = new RigSupervisor({
+  const supervisor: RigSupervisor = new RigSupervisor({
     store: createRunStore(database.db),
     clock,
     sha256: sha256Hex,
     linkOf: (rigId) => stations.get(rigId)?.link ?? null,
     armOf: (rigId) => arms.armOf(rigId),
+    guidedBy: (rigId) => guided.takenBy(rigId),
     perform: (effect, start) => {
       if (effect.kind === 'void-arm') arms.end({ labId: start.labId, rigId: start.rigId }, effect.reason, engineItself);
       else log.info({ runId: start.runId, topic: effect.topic }, effect.text);
     },
   });
 
+  const guided: GuidedMoves = new GuidedMoves({
+    clock,
+    linkOf: (rigId) => stations.get(rigId)?.link ?? null,
+    armOf: (rigId) => arms.armOf(rigId),
+    takenBy: (rigId) => supervisor.takenBy(rigId),
+    endArm: (rig, why, by) => arms.end(rig, why, by),
+    onChange: onLine,
+  });
+
   /** Two drivers on one rig would be worse than none. */
   function letGo(): void {
     log.fatal('another server has taken a rig over; this one lets go of all of them');
     supervisor.close();
+    guided.closeAll();
     background.add(stations.close(), 'closing the lines');
   }
 
@@ -73,9 +86,10 @@ export function buildRigSide(
   function heedLink(station: RigStation, event: LinkEvent): void {
     const why = endOfArm(event);
     if (why !== null) arms.end(station, why, engineItself);
+    guided.heard(station.rigId, event);
   }
 
-  return { arms, leases, stations, supervisor };
+  return { arms, leases, stations, supervisor, guided };
 }
 
 function endOfArm(event: LinkEvent): string | null {

@@ -70,7 +70,7 @@ class Life {
       services.activeRuns.add(run);
       services.stations.loadMasses(run.rigId, run.start.rig);
     }
-    await services.access.refresh(services.activeRuns.labIds());
+    await services.access.refresh(services.watchedLabs());
     const { quarantined } = await services.supervisor.recover();
     for (const { start, why } of quarantined) {
       services.activeRuns.remove(start.runId);
@@ -88,6 +88,8 @@ class Life {
     this.stopped = true;
     this.cancelRefresh();
     services.live.close();
+    services.lines.close();
+    services.guided.closeAll();
     services.supervisor.close();
     const crewStopped = inside.crew.stop();
     await inside.closeTasks();
@@ -102,7 +104,7 @@ class Life {
   private refreshRegularly(): void {
     const { services } = this;
     this.cancelRefresh = services.clock.after(refreshMs, () => {
-      services.background(services.access.refresh(services.activeRuns.labIds()), 'copying sessions into memory');
+      services.background(services.access.refresh(services.watchedLabs()), 'copying sessions into memory');
       if (!this.stopped) this.refreshRegularly();
     });
   }

@@ -5,7 +5,9 @@ import { sha256Hex } from '../evaluation/sha256';
 import { AccessDirectory } from '../http/access-directory';
 import { ActiveRuns } from '../http/active-runs';
 import { LiveHub } from '../http/live/live-hub';
-import { liveSourceOf } from '../http/live/live-source';
+import { LineHub } from '../http/live/line-hub';
+import { liveSourceOf, mayStillRead } from '../http/live/live-source';
+import { lineOf } from '../http/line-view';
 import type { Services } from '../http/services';
 import { workEvaluation } from '../http/work/evaluation-job';
 import { rehearsalJobKind, workRehearsal } from '../http/work/rehearsal-job';
@@ -24,7 +26,7 @@ import { JobCrew } from './job-crew';
 import { createWorkerTasks } from './worker-tasks';
 
 /** What begins and ends with the server and no route needs. */
-export interface Inside extends Omit<RigSide, 'supervisor'> {
+export interface Inside extends Omit<RigSide, 'supervisor' | 'guided'> {
   crew: JobCrew;
   background: Background;
   /** Unfinished runs are driven from now on. */
@@ -44,19 +46,29 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   const nowUtcMs = () => clock.utcMs();
   const samples = createSampleStore(database);
   const sessions = createSessions({ db: database.db, clock, newToken, sha256: sha256Hex });
-  const { arms, leases, stations, supervisor } = buildRigSide(parts, { log, background, samples });
+  const { arms, leases, stations, supervisor, guided } = buildRigSide(parts, {
+    ...{ log, background, samples },
+    onLine: (rigId) => lines.changed(rigId),
+  });
   const live = new LiveHub({ source: liveSourceOf(() => services), clock, streamsPerUser: config.limits.streamsPerUser });
+  const lines = new LineHub({
+    clock,
+    lineOf: (rig) => lineOf(services, rig),
+    mayStillRead: (reader, labId) => mayStillRead(services, reader, labId),
+    streamsPerUser: config.limits.streamsPerUser,
+  });
   const access = new AccessDirectory({ source: accessSource(database.db, nowUtcMs), sessions, clock, sha256: sha256Hex });
   const workers = overrides.tasks === undefined ? createWorkerTasks() : null;
   const takenUp = openPromise();
   const services: Services = {
-    ...{ clock, log, database, sessions, access, samples, stations, arms, supervisor, live, newToken },
+    ...{ clock, log, database, sessions, access, samples, stations, arms, supervisor, guided, live, lines, newToken },
     config: { ...config, limits: { ...config.limits } },
     newId: randomUUID,
     sha256: sha256Hex,
     idempotency: createIdempotency(database.db, nowUtcMs),
     mail: overrides.mail ?? noMail,
     activeRuns: new ActiveRuns({ supervisor, live }),
+    watchedLabs: () => [...new Set([...services.activeRuns.labIds(), ...guided.labIds()])],
     tasks: overrides.tasks ?? (workers as NonNullable<typeof workers>),
     background: (work, what) => background.add(work, what),
     takenUp: takenUp.promise,
@@ -64,7 +76,10 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     pokeJobs: () => crew.poke(),
   };
   const crew = buildCrew(parts, services);
-  access.onEnded((ended) => live.endAccess(ended));
+  access.onEnded((ended) => {
+    live.endAccess(ended);
+    lines.endAccess(ended);
+  });
   stations.onSamples(({ rigId, channelId, channel, unit, utcMs, value }) =>
     live.sampled(rigId, { channelId, channel, unit, utcMs: [...utcMs], value: [...value] }),
   );

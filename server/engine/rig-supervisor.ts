@@ -16,6 +16,8 @@ export interface SupervisorParts {
   /** The open link of a rig; null while it has none. The same object for as long as a run may use it. */
   linkOf(rigId: string): TurntableLink | null;
   armOf(rigId: string): Arm | null;
+  /** In a sentence, who moves the rig by hand; null while nobody does. */
+  guidedBy(rigId: string): string | null;
   /** Notifications and the end of the arm. */
   perform(effect: Exclude<Effect, { kind: 'link' }>, start: RunStart): void;
   /** An error that is nobody's answer, to be logged. */
@@ -100,6 +102,15 @@ export class RigSupervisor {
     return [...this.byRig.values()].find((driver) => driver.runId === runId) ?? null;
   }
 
+  /** In a sentence, the run that has the rig; null while none has. */
+  takenBy(rigId: string): string | null {
+    const active = this.byRig.get(rigId);
+    if (active !== undefined && !active.isOver())
+      return `The rig is taken by another run (${active.facts().state}). Wait for its end, or stop it.`;
+    const quarantined = this.quarantine.get(rigId);
+    return quarantined === undefined ? null : `The rig is blocked by an unfinished run. ${quarantined.why}`;
+  }
+
   quarantinedOf(rigId: string): QuarantinedRun | null {
     return this.quarantine.get(rigId) ?? null;
   }
@@ -176,11 +187,8 @@ export class RigSupervisor {
   }
 
   private assertFree(rigId: string): void {
-    const active = this.byRig.get(rigId);
-    if (active !== undefined && !active.isOver())
-      throw new StartRefused('rig-busy', `The rig is taken by another run (${active.facts().state}). Wait for its end, or stop it.`);
-    const quarantined = this.quarantine.get(rigId);
-    if (quarantined !== undefined) throw new StartRefused('rig-busy', `The rig is blocked by an unfinished run. ${quarantined.why}`);
+    const why = this.takenBy(rigId) ?? this.parts.guidedBy(rigId);
+    if (why !== null) throw new StartRefused('rig-busy', why);
   }
 
   private readyLink(rigId: string): TurntableLink {

@@ -23,3 +23,16 @@ export function audited<T>(
     return done;
   });
 }
+
+/** Enters what a person did into the audit chain when the database can be reached; the act itself does not wait for it. */
+export function auditLater(
+  { me, membership, services }: { me: SignedIn; membership: Membership; services: Services },
+  kind: string,
+  data: Record<string, unknown>,
+): void {
+  const fact = { labId: membership.labId, who: { id: me.userId, name: me.name }, kind, data, utcMs: services.clock.utcMs() };
+  services.background(
+    services.database.db.transaction((tx) => appendAudit(tx, fact, services.sha256)),
+    'an entry of the audit chain',
+  );
+}

@@ -163,7 +163,7 @@ function drive(services: Services, run: RunRecord): void {
     throw error;
   }
   services.access
-    .refresh(services.activeRuns.labIds())
+    .refresh(services.watchedLabs())
     .catch((error: unknown) => services.log.warn({ err: error }, 'sessions could not be copied into memory'));
 }
 

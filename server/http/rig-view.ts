@@ -6,6 +6,17 @@ import { activeRuns, type RunListRow } from '../store/runs-read';
 import { isoOf, isoOrNull } from './maker';
 import type { Services } from './services';
 
+const linkTag = (services: Services, rig: RigRecord) => services.sha256(JSON.stringify(rig.link)).slice(0, 12);
+
+/** The ETag of a rig: its revision and its line, which change apart. */
+export const rigTag = (services: Services, rig: RigRecord): string => `${String(rig.revision)}-${linkTag(services, rig)}`;
+
+/** Whether whoever sends this ETag has looked at the revision that holds now. */
+export const knowsRevision = (tag: string | null, rig: RigRecord): boolean => tag?.split('-')[0] === String(rig.revision);
+
+/** Whether whoever sends this ETag has looked at the line that holds now. */
+export const knowsLink = (services: Services, tag: string | null, rig: RigRecord): boolean => tag?.split('-')[1] === linkTag(services, rig);
+
 /** The live state of a rig's line and turntable; what the line has not told is null. */
 function rigLiveOf(station: RigStation | null): RigLive {
   if (station === null)

@@ -1,4 +1,5 @@
 import type { Logger } from 'pino';
+import type { GuidedMoves } from '../engine/guided-moves';
 import type { RigSupervisor } from '../engine/rig-supervisor';
 import type { ArmKeeper } from '../interfaces/arm-keeper';
 import type { Clock } from '../interfaces/clock';
@@ -12,6 +13,7 @@ import type { SessionPort } from '../interfaces/sessions';
 import type { Connection } from '../store/database';
 import type { AccessDirectory } from './access-directory';
 import type { ActiveRuns } from './active-runs';
+import type { LineHub } from './live/line-hub';
 import type { LiveHub } from './live/live-hub';
 
 /** Everything a route may use; built once by `server/boot/build-server.ts`. */
@@ -34,9 +36,13 @@ export interface Services {
   stations: RigStations;
   arms: ArmKeeper;
   supervisor: RigSupervisor;
+  guided: GuidedMoves;
   activeRuns: ActiveRuns;
   live: LiveHub;
+  lines: LineHub;
   tasks: HeavyTasks;
+  /** Labs in which something moves or may: their members must be able to hold and stop without the database. */
+  watchedLabs(): string[];
   /** Lets something go on after the answer; a failure is logged, and `idle` waits for it. */
   background(work: Promise<unknown>, what: string): void;
   /** Resolves when this server has taken up the runs that another left unfinished. */

@@ -124,6 +124,8 @@ async function dataCheck(services: Services, station: RigStation | null, nowUtcM
 function freeCheck(services: Services, rigId: string, run: RunListRow | undefined) {
   const quarantined = services.supervisor.quarantinedOf(rigId);
   if (quarantined !== null) return fail(quarantined.why);
+  const guidedBy = services.guided.takenBy(rigId);
+  if (guidedBy !== null) return fail(guidedBy);
   return run === undefined ? pass('The rig is free.') : fail(busyWords(run));
 }
 

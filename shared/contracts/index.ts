@@ -1,5 +1,6 @@
 import * as data from './data';
 import * as evaluations from './evaluations';
+import * as link from './link';
 import * as people from './people';
 import * as protocols from './protocols';
 import * as rigs from './rigs';
@@ -11,6 +12,6 @@ const isRoute = (value: unknown): value is RouteContract =>
   typeof value === 'object' && value !== null && 'method' in value && 'path' in value && 'access' in value;
 
 /** Every route of the API, once. */
-export const routes: readonly RouteContract[] = [service, people, rigs, protocols, runs, data, evaluations].flatMap((module) =>
+export const routes: readonly RouteContract[] = [service, people, rigs, link, protocols, runs, data, evaluations].flatMap((module) =>
   Object.values(module).filter(isRoute),
 );

@@ -126,9 +126,10 @@ export const changeLink = defineRoute({
   path: `${rigPath}/link`,
   access: 'rig.edit',
   status: 200,
+  etag: 'required',
   body: linkSettingsSchema,
   response: rigViewSchema,
-  problems: ['invalid-input', 'not-found', 'rig-busy', 'not-yet'],
+  problems: ['invalid-input', 'not-found', 'edited-meanwhile', 'precondition-required', 'rig-busy', 'not-yet'],
 });
 export const tryLink = defineRoute({
   name: 'tryLink',

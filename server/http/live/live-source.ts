@@ -1,6 +1,7 @@
 import { findRun, readEvents, readSteps } from '@/server/store/runs-read';
 import { isoOrNull } from '../maker';
 import { storedRunView } from '../run-view';
+import type { SignedIn } from '../route-context';
 import type { Services } from '../services';
 import type { LiveSource } from './live-hub';
 
@@ -24,9 +25,12 @@ export function liveSourceOf(services: () => Services): LiveSource {
         angleDeg: link?.controller()?.angleDeg ?? null,
       };
     },
-    mayStillRead: async (reader, labId) => {
-      const me = await services().access.signedIn(reader.token);
-      return me !== null && (await services().access.membership(me.userId, labId)) !== null;
-    },
+    mayStillRead: (reader, labId) => mayStillRead(services(), reader, labId),
   };
+}
+
+/** Whether whoever opened a stream still has a session and is still a member. */
+export async function mayStillRead({ access }: Services, reader: SignedIn, labId: string): Promise<boolean> {
+  const me = await access.signedIn(reader.token);
+  return me !== null && (await access.membership(me.userId, labId)) !== null;
 }

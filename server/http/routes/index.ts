@@ -1,6 +1,7 @@
 import type { MountedRoute } from '../route-context';
 import { dataRoutes } from './data';
 import { evaluationRoutes } from './evaluations';
+import { lineRoutes } from './line';
 import { liveRoutes } from './live';
 import { peopleRoutes } from './people';
 import { protocolRoutes } from './protocols';
@@ -13,6 +14,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...serviceRoutes,
   ...peopleRoutes,
   ...rigRoutes,
+  ...lineRoutes,
   ...protocolRoutes,
   ...runRoutes,
   ...liveRoutes,

@@ -5,7 +5,7 @@ import { activeRuns } from '@/server/store/runs-read';
 import { audited } from '../audited';
 import { isoOf, makerOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
-import { armViewOf, rigSummaryOf, rigViewOf } from '../rig-view';
+import { armViewOf, knowsLink, knowsRevision, rigSummaryOf, rigTag, rigViewOf } from '../rig-view';
 import { mount, type Membership, type SignedIn } from '../route-context';
 import type { Services } from '../services';
 import { busyWords, makeStartChecks } from '../start-checks';
@@ -23,6 +23,13 @@ async function load({ membership, services }: Pick<Caller, 'membership' | 'servi
 async function assertFree(services: Services, rig: store.RigRecord): Promise<void> {
   const run = (await activeRuns(services.database.db, rig.labId)).get(rig.id);
   if (run !== undefined) throw new ProblemError('rig-busy', busyWords(run));
+}
+
+/** Neither a run nor a person at the guided first move has the rig. */
+async function assertUntouched(services: Services, rig: store.RigRecord): Promise<void> {
+  await assertFree(services, rig);
+  const guidedBy = services.guided.takenBy(rig.id);
+  if (guidedBy !== null) throw new ProblemError('rig-busy', guidedBy);
 }
 
 const shortestArmMs = 60_000;
@@ -66,15 +73,17 @@ const rigRouteList = [
 
   mount(contracts.getRig, async (context) => {
     const rig = await load(context, context.params.rigId);
-    context.setEtag(String(rig.revision));
+    context.setEtag(rigTag(context.services, rig));
     return rigViewOf(context.services, rig);
   }),
 
   mount(contracts.reviseRig, async (context) => {
     const { body, membership, params, services, ifMatch } = context;
     const before = await load(context, params.rigId);
-    if (String(before.revision) !== ifMatch) throw await revisedMeanwhile(context, before);
+    if (!knowsRevision(ifMatch, before)) throw await revisedMeanwhile(context, before);
     await assertFree(services, before);
+    if (services.guided.isMoving(before.id))
+      throw new ProblemError('rig-busy', `${before.name} is being moved. Wait until it stands still, then make the revision.`);
     const entry = {
       kind: 'rig.revised',
       data: (done: boolean) => ({ rigId: before.id, from: before.revision, to: done ? before.revision + 1 : null, reason: body.reason }),
@@ -86,7 +95,8 @@ const rigRouteList = [
     });
     const rig = await load(context, before.id);
     if (done) await services.stations.put(rig);
-    context.setEtag(String(rig.revision));
+    if (rig.document.motion !== undefined) services.guided.revised(rig.id, rig.document.motion);
+    context.setEtag(rigTag(context.services, rig));
     return rigViewOf(services, rig);
   }),
 
@@ -113,9 +123,14 @@ async function revisedMeanwhile(
 
 const linkRoutes = [
   mount(contracts.changeLink, async (context) => {
-    const { body, params, services } = context;
+    const { body, params, services, ifMatch } = context;
     const before = await load(context, params.rigId);
-    await assertFree(services, before);
+    if (!knowsLink(services, ifMatch, before))
+      throw new ProblemError(
+        'edited-meanwhile',
+        `Somebody chose another line for ${before.name} after you opened this page. Look at it as it is now, then choose yours.`,
+      );
+    await assertUntouched(services, before);
     await services.stations.assertAllowed(body);
     const entry = { kind: 'rig.link-changed', data: () => ({ rigId: before.id, from: before.link, to: body }) };
     await audited(context, entry, (tx) =>
@@ -123,12 +138,13 @@ const linkRoutes = [
     );
     const rig = await load(context, before.id);
     await services.stations.put(rig);
+    context.setEtag(rigTag(services, rig));
     return rigViewOf(services, rig);
   }),
 
   mount(contracts.tryLink, async (context) => {
     const rig = await load(context, context.params.rigId);
-    await assertFree(context.services, rig);
+    await assertUntouched(context.services, rig);
     await context.services.stations.assertAllowed(context.body);
     return context.services.stations.tryLine(rig, context.body);
   }),

@@ -2,10 +2,10 @@ import type { Response } from 'express';
 import * as contracts from '@/shared/contracts/runs';
 import { stepsCsv } from '@/shared/archive/step-csv';
 import type { Answer, RunDriver } from '@/server/engine/run-driver';
-import { appendAudit } from '@/server/store/audit';
 import { findProtocol, findRevision } from '@/server/store/protocols';
 import { findMassSet, findRig } from '@/server/store/rigs';
 import * as store from '@/server/store/runs-read';
+import { auditLater } from '../audited';
 import { archiveInputOf, assertEnded } from '../archive-input';
 import { assertFreshTap, beginRehearsal, beginRun, type Caller } from '../begin-run';
 import { isoOf } from '../maker';
@@ -115,15 +115,6 @@ async function driverOf(services: Services, labId: string, runId: string): Promi
   throw new ProblemError('not-possible-now', `${why} Use the switch at the rig if anything moves.`);
 }
 
-/** Enters what a person did into the audit chain when the database can be reached; the act itself does not wait for it. */
-function auditLater({ me, membership, services }: Caller, kind: string, runId: string): void {
-  const fact = { labId: membership.labId, who: { id: me.userId, name: me.name }, kind, data: { runId }, utcMs: services.clock.utcMs() };
-  services.background(
-    services.database.db.transaction((tx) => appendAudit(tx, fact, services.sha256)),
-    'an entry of the audit chain',
-  );
-}
-
 function accepted(runId: string, answer: Answer): { runId: string; serverAt: string } {
   if (!answer.ok) throw new ProblemError('not-possible-now', answer.why);
   return { runId, serverAt: isoOf(answer.serverAtUtcMs) };
@@ -133,14 +124,14 @@ const interventionRoutes = [
   mount(contracts.holdRun, async (context) => {
     const { params, me, membership, services } = context;
     const answer = (await driverOf(services, membership.labId, params.runId)).hold(me.name);
-    auditLater(context, 'run.hold-asked', params.runId);
+    auditLater(context, 'run.hold-asked', { runId: params.runId });
     return accepted(params.runId, answer);
   }),
 
   mount(contracts.holdAfterDwell, async (context) => {
     const { params, me, membership, services } = context;
     const answer = (await driverOf(services, membership.labId, params.runId)).holdAfterDwell(me.name);
-    auditLater(context, 'run.hold-after-dwell-asked', params.runId);
+    auditLater(context, 'run.hold-after-dwell-asked', { runId: params.runId });
     return accepted(params.runId, answer);
   }),
 
@@ -155,7 +146,7 @@ const interventionRoutes = [
         driver.state().state === 'held' && services.arms.armOf(rigId) === null ? 'not-armed' : 'not-possible-now',
         answer.why,
       );
-    auditLater(context, 'run.resumed', params.runId);
+    auditLater(context, 'run.resumed', { runId: params.runId });
     return accepted(params.runId, answer);
   }),
 
@@ -168,7 +159,7 @@ const interventionRoutes = [
       if (services.supervisor.quarantinedOf(run.rigId)?.start.runId === run.id) return endQuarantined(context, run);
     }
     const answer = (await driverOf(services, membership.labId, params.runId)).stop(me.name);
-    auditLater(context, 'run.stop-asked', params.runId);
+    auditLater(context, 'run.stop-asked', { runId: params.runId });
     return accepted(params.runId, answer);
   }),
 ];
@@ -180,7 +171,7 @@ async function endQuarantined(caller: Caller, run: store.RunRecord): Promise<{ r
   const why = services.supervisor.quarantinedOf(run.rigId)?.why ?? '';
   await store.markRunFailed(services.database.db, run, { why: `${why} Ended by ${me.name}.`, nowUtcMs });
   services.supervisor.release(run.rigId);
-  auditLater(caller, 'run.stop-asked', run.id);
+  auditLater(caller, 'run.stop-asked', { runId: run.id });
   return { runId: run.id, serverAt: isoOf(nowUtcMs) };
 }
 

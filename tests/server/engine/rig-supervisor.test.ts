@@ -44,6 +44,7 @@ function makeLab(): Lab {
       clock,
       sha256,
       linkOf: (rigId) => links.get(rigId) ?? null,
+      guidedBy: () => null,
       armOf: (rigId) => arms.get(rigId) ?? null,
       perform: (effect) => performed.push(effect),
     });

@@ -98,7 +98,8 @@ describe('the line', () => {
     ['/dev/null', 'not a pseudo-terminal'],
     ['/dev/ttyUSB0', 'not a pseudo-terminal'],
   ])('at %s is refused as not built yet', async (path, words) => {
-    const answer = await lab.as('keeper', 'PUT', `${rig}/link`).send({ kind: 'serial', path }).expect(422);
+    const { etag } = (await lab.as('keeper', 'GET', rig)).headers as { etag: string };
+    const answer = await lab.as('keeper', 'PUT', `${rig}/link`).set('If-Match', etag).send({ kind: 'serial', path }).expect(422);
     expect(answer.body).toMatchObject({ code: 'not-yet', detail: expect.stringContaining(words) });
     expect((await lab.as('viewer', 'GET', rig)).body.link).toEqual({ kind: 'simulated' });
   });

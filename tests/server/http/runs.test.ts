@@ -233,7 +233,9 @@ describe('a run', () => {
   test('keeps the rig as it is: document and line cannot change under it', async () => {
     const runId = await lab.run(quickProtocol());
     const rig = `/labs/${demoIds.lab}/rigs/${demoIds.rig}`;
-    expect((await lab.as('keeper', 'PUT', `${rig}/link`).send({ kind: 'simulated' }).expect(409)).body.detail).toContain(runId);
+    const { etag } = (await lab.as('keeper', 'GET', rig)).headers as { etag: string };
+    const other = await lab.as('keeper', 'PUT', `${rig}/link`).set('If-Match', etag).send({ kind: 'simulated' }).expect(409);
+    expect(other.body.detail).toContain(runId);
     await lab.as('keeper', 'POST', `${rig}/link/try`).send({ kind: 'simulated' }).expect(409);
   });
 });
