@@ -1,7 +1,6 @@
 import { createHash } from 'node:crypto';
 import { existsSync, mkdirSync, readFileSync, readdirSync, renameSync, rmSync, statSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
-import { writeFirstPage } from './first-page.mjs';
 import { root, state } from './paths.mjs';
 import { precompress } from './precompress.mjs';
 import { must } from './run.mjs';
@@ -43,6 +42,8 @@ export async function ensureWebBuild() {
       env: { ...process.env, ...expoEnvironment },
     }),
   );
+  // Loaded only now: a bare clone has no packages when this file is read.
+  const { writeFirstPage } = await import('./first-page.mjs');
   await writeFirstPage(fresh);
   await precompress(fresh);
   rmSync(join(root, 'dist'), { recursive: true, force: true });
