@@ -1,6 +1,7 @@
 import { randomBytes, randomUUID } from 'node:crypto';
 import { join } from 'node:path';
 import type { Logger } from 'pino';
+import { endOfArm, knownAfter } from '../engine/end-of-arm';
 import { GuidedMoves } from '../engine/guided-moves';
 import { RigSupervisor } from '../engine/rig-supervisor';
 import { sha256Hex } from '../evaluation/sha256';
@@ -82,23 +83,18 @@ export function buildRigSide(
     background.add(stations.close(), 'closing the lines');
   }
 
-  /** Whatever lets people or surprises into the room ends the arm, run or no run. */
+  const known = new Map<string, boolean>();
+
+  /** Whatever lets people or surprises into the room, or loses the position, ends the arm, run or no run. */
   function heedLink(station: RigStation, event: LinkEvent): void {
-    const why = endOfArm(event);
+    const wasKnown = known.get(station.rigId) ?? false;
+    const why = endOfArm(event, wasKnown);
+    known.set(station.rigId, knownAfter(event, wasKnown));
     if (why !== null) arms.end(station, why, engineItself);
     guided.heard(station.rigId, event);
   }
 
   return { arms, leases, stations, supervisor, guided };
-}
-
-function endOfArm(event: LinkEvent): string | null {
-  if (event.kind === 'interlock' && !event.closed) return 'the interlock was opened';
-  if (event.kind === 'supply' && !event.present) return 'the motor supply was lost';
-  if (event.kind === 'reset') return 'the controller restarted';
-  if (event.kind === 'ready' && !event.controller.interlockClosed) return 'the interlock is open';
-  if (event.kind === 'ready' && !event.controller.supplyPresent) return 'the motor supply is off';
-  return null;
 }
 
 /** The simulated turntable of a rig: one for the life of this server, or one that is handed in and lives longer. */

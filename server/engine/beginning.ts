@@ -3,6 +3,7 @@ import { beginCursor } from '@/shared/protocol/cursor';
 import type { Draft } from './draft';
 import type { ControllerState } from '../interfaces/turntable-link';
 import type { KnownController, RunContext } from './run-context';
+import { nothingKnown } from './position';
 import { chooseNext } from './steps';
 import { ANSWER_MS } from './timing';
 
@@ -18,6 +19,7 @@ export function newContext(start: RunStart, nowUtcMs: number): RunContext {
     arm: start.arm,
     armVoid: null,
     controller: null,
+    position: nothingKnown,
     linkUp: false,
     linkDownSinceUtcMs: null,
     uPlanS: 0,

@@ -17,7 +17,6 @@ import {
   hasRestarted,
   noteArmEnded,
   noteArmKey,
-  noteEdge,
   noteInterlock,
   noteLease,
   noteLost,
@@ -30,6 +29,7 @@ import {
   noteSupply,
   unseenCause,
 } from './observations';
+import { hasSlipped, noteEdge } from './position';
 import { type RunContext, type RunEvent } from './run-context';
 import { finishMotion, noteBegan, noteEnded, takeAhead } from './motions';
 import { chooseNext, standingEndUtcMs } from './steps';
@@ -179,6 +179,10 @@ export const returns = [...guarded(bootedAnew, gravely(noteReset, noteReady)), .
 /** What ends or changes a run that is under way, whatever step it is in. */
 export const underWay = {
   ...heard,
+  'link.edge': [
+    { guard: when(hasSlipped, noteEdge), target: 'holding' as const, actions: act(noteEdge, beginHold) },
+    { actions: act(noteEdge) },
+  ],
   hold: { target: 'holding' as const, actions: act(requestHold) },
   stop: { target: 'stopping' as const, actions: act(requestStop) },
   'hold-after-dwell': { actions: act(requestHoldAfterDwell) },

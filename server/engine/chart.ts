@@ -23,6 +23,7 @@ import {
 import { noteReady, noteReset, noteStandstill, noteStrangeMotion } from './observations';
 import { type Advance, CHART_VERSION, type ChartState, type RunContext, type RunEvent, type RunSnapshot } from './run-context';
 import { askAgain, dropAhead, expectEnd, finishMotion, noteBegan, noteEnded, takeAhead } from './motions';
+import { slipFoundHoming } from './position';
 import { chooseNext, endStanding, sendAhead } from './steps';
 import {
   act,
@@ -97,7 +98,14 @@ const machine = chart.createMachine({
       on: {
         ...underWay,
         'link.motion-began': [{ guard: isMine, actions: act(noteBegan, expectEnd) }, strangeMotion],
-        'link.homed': { guard: isMine, target: 'choosing', actions: act(noteEnded, finishMotion, chooseNext) },
+        'link.homed': [
+          {
+            guard: (told) => isMine(told) && when(slipFoundHoming, noteEnded)(told),
+            target: 'holding',
+            actions: act(noteEnded, finishMotion, beginHold),
+          },
+          { guard: isMine, target: 'choosing', actions: act(noteEnded, finishMotion, chooseNext) },
+        ],
         'link.home-failed': { guard: isMine, target: 'failed', actions: act(explainHomeFailure) },
         /** `done` is followed by `homed`, which carries the angle. */
         'link.motion-ended': motionEnds.slice(1),

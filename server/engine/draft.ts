@@ -1,6 +1,7 @@
 import type { RunStart, StepOutcome, StepRow } from '@/shared/archive/run-records';
 import type { Instant } from '../interfaces/clock';
 import type { LinkCommand } from '../interfaces/turntable-link';
+import { noteRowClosed } from './position';
 import type {
   ActiveStep,
   Effect,
@@ -132,6 +133,7 @@ export class Draft {
     if (step.row.kind === 'dwell') step.row.good = true;
     if (step.row.kind === 'dwell' && outcome === 'done') this.context.dwellsDone += 1;
     step.broken = outcome === 'cut short';
+    noteRowClosed(this, step.row, step.motion !== null);
     this.saveRow(step.row);
     this.log('step-ended', { seq: step.row.seq, path: step.row.path, outcome, angleDeg }, at);
   }

@@ -57,6 +57,7 @@ const causeWords: Record<Exclude<MotionEndCause, 'done'>, string> = {
 export function heardGuided(state: GuidedState, event: LinkEvent, motion: RigMotion): GuidedState {
   switch (event.kind) {
     case 'edge': {
+      if (event.angleDeg === null) return state;
       const steps = Math.round((event.angleDeg - motion.homeDeg) * motion.stepsPerDegree) + 0;
       return { ...state, edges: [...state.edges, { steps, direction: event.direction }].slice(-mostEdges) };
     }

@@ -3,6 +3,7 @@ import { startRun } from './beginning';
 import type { Draft } from './draft';
 import type { InterruptionCause, KnownController, RunEvent } from './run-context';
 import { finishMotion, reachedTarget, takeAhead } from './motions';
+import { slipRefusal } from './position';
 import { predictEndUtcMs } from './predicted-end';
 import { beginHome, beginStanding, beginSwing, chooseNext, standingEndUtcMs, toleranceDeg } from './steps';
 import { CONFIRM_MS, GAP_LIMIT_MS, LEAD_MS } from './timing';
@@ -129,7 +130,7 @@ function motionRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): str
   if (!known.supplyPresent) return 'The motor supply is off; switch it on at the rig.';
   if (!known.positionKnown && context.step?.row.kind !== 'home')
     return 'The controller does not know its position, so this run cannot go on. Stop it, and home the rig in a new run.';
-  return elsewhereRefusal(draft, known) ?? armRefusal(draft, arm, armVoid);
+  return slipRefusal(draft) ?? elsewhereRefusal(draft, known) ?? armRefusal(draft, arm, armVoid);
 }
 
 function elsewhereRefusal(draft: Draft, known: KnownController): string | null {
@@ -289,7 +290,10 @@ export function becomeFinished(draft: Draft): void {
   const { moment } = context;
   const asked = start.protocol.atEnd?.drivers === 'release';
   const release = asked && start.rig.motion?.safeWhenFree === true;
-  if (release) draft.command((id) => ({ kind: 'stop', id, releaseDrivers: true }));
+  if (release) {
+    draft.command((id) => ({ kind: 'stop', id, releaseDrivers: true }));
+    draft.voidArm('the drivers were released, so the position is lost');
+  }
   end(draft, moment.utcMs);
   const why = asked && !release ? { driversWhy: 'the rig is not marked as safe when free (motion.safeWhenFree)' } : {};
   draft.log('finished', { dwells: context.dwellsDone, drivers: release ? 'release' : 'keep', ...why }, moment);

@@ -3,6 +3,7 @@ import { advanceCursor } from '@/shared/protocol/cursor';
 import { swingMove } from '@/shared/protocol/durations';
 import type { Instant } from '../interfaces/clock';
 import type { Draft } from './draft';
+import { forgetPosition, noteHomed } from './position';
 import { endStanding, openSwing, sendMove, standingEndUtcMs, toleranceDeg, writeMark } from './steps';
 import { LATE_MS, MOTION_GRACE_MS } from './timing';
 
@@ -94,6 +95,8 @@ export function noteEnded(draft: Draft): void {
   Object.assign(draft.controller, { moving: false, angleDeg, positionKnown: angleDeg !== null });
   motion.reached = ending.cause === 'done';
   Object.assign(step.row, { endUtcMs: stamp.utcMs, uEndS: stamp.uS, angleEndDeg: angleDeg });
+  if (event.type === 'link.homed') noteHomed(draft);
+  else if (angleDeg === null) forgetPosition(draft);
 }
 
 /** The motion ended where it should: the row is done and the sources stand. */
@@ -103,7 +106,6 @@ export function finishMotion(draft: Draft): void {
   const { row } = draft.step;
   const at: Instant = { utcMs: row.endUtcMs ?? draft.stamp.utcMs, uS: row.uEndS ?? draft.stamp.uS };
   const outcome: StepOutcome = motion.late ? 'late' : 'done';
-  if (row.kind === 'home') row.angleSource = 'edge-verified';
   draft.closeRow({ at, angleDeg: row.angleEndDeg, outcome });
   draft.standAt(at, row.angleEndDeg ?? moment.angleDeg);
   draft.context.station = row.station;

@@ -3,11 +3,9 @@ import type { Draft } from './draft';
 import type { ControllerState } from '../interfaces/turntable-link';
 import type { RunContext } from './run-context';
 import { noteGrave } from './halting';
+import { forgetPosition } from './position';
 
 /** What the controller and its line tell, written into the context and the log. Nothing is decided here. */
-
-/** A pass of the home edge within this of where it was found proves the counted angle, deg (with the backlash). */
-const EDGE_TOLERANCE_DEG = 0.02;
 
 export function noteReady(draft: Draft): void {
   const { link } = draft.told('link.ready');
@@ -19,6 +17,7 @@ export function noteReady(draft: Draft): void {
   context.linkUp = true;
   context.linkDownSinceUtcMs = null;
   context.uPlanS = draft.stamp.uS;
+  if (!controller.positionKnown) forgetPosition(draft);
   const gapS = linkDownSinceUtcMs === null ? 0 : Math.max(0, (draft.nowUtcMs - linkDownSinceUtcMs) / 1000);
   draft.log('link-ready', { bootId: controller.bootId, firmware: controller.firmware, gapS });
   if (unseen === null) return;
@@ -62,6 +61,7 @@ export function noteReset(draft: Draft): void {
   const { event, context } = draft;
   const bootId = event.type === 'link.ready' ? event.link.controller.bootId : draft.told('link.reset').link.bootId;
   if (context.controller !== null) Object.assign(context.controller, { bootId, positionKnown: false, angleDeg: null, moving: false });
+  forgetPosition(draft);
   draft.log('controller-reset', { bootId });
   noteGrave(draft, 'controller-reset');
 }
@@ -81,6 +81,7 @@ export function noteSupply(draft: Draft): void {
   const { controller } = draft.context;
   if (controller !== null) controller.supplyPresent = present;
   if (controller !== null && !present) Object.assign(controller, { positionKnown: false, angleDeg: null });
+  if (!present) forgetPosition(draft);
   draft.log('supply', { present });
   if (!present) noteGrave(draft, 'supply');
 }
@@ -102,22 +103,10 @@ export function noteLease(draft: Draft): void {
   draft.log('lease-lapsed');
 }
 
-/** Each pass of the home edge proves the counted angle, or tells by how much it is off. */
-export function noteEdge(draft: Draft): void {
-  const { link } = draft.told('link.edge');
-  const { angleDeg, direction } = link;
-  const { homeDeg = 0, backlash_deg: backlashDeg = 0 } = draft.start.rig.motion ?? {};
-  const offDeg = angleDeg - homeDeg;
-  draft.log('home-edge', { angleDeg, direction, offDeg });
-  const { step } = draft.context;
-  if (step?.motion == null || Math.abs(offDeg) > EDGE_TOLERANCE_DEG + backlashDeg) return;
-  step.row.angleSource = 'edge-verified';
-  draft.saveRow(step.row);
-}
-
 export function noteStandstill(draft: Draft): void {
   const { link } = draft.told('link.standstill');
   const { angleDeg } = link;
+  if (angleDeg === null) forgetPosition(draft);
   if (draft.context.controller !== null)
     Object.assign(draft.context.controller, { moving: false, angleDeg, positionKnown: angleDeg !== null });
 }

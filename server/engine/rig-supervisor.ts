@@ -8,6 +8,7 @@ import type { TurntableLink } from '../interfaces/turntable-link';
 import { checkAtStart } from './check-at-start';
 import { type Arm, CHART_VERSION, type Effect } from './run-context';
 import { RunDriver, type RunChange } from './run-driver';
+import { restored } from './stored-snapshot';
 
 export interface SupervisorParts {
   store: RunStore;
@@ -159,7 +160,7 @@ export class RigSupervisor {
   }
 
   private unfitness({ start, chartVersion, snapshot }: StoredRun): string | null {
-    if (snapshot !== null && chartVersion !== CHART_VERSION) {
+    if (snapshot !== null && restored(snapshot, chartVersion) === null) {
       return `The run was saved by another version of the run engine (${chartVersion}; this one reads ${CHART_VERSION}). Look at the rig, then end the run.`;
     }
     return this.parts.linkOf(start.rigId) === null ? 'The rig has no link any more. Set one up, then start the server again.' : null;

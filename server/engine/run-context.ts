@@ -1,5 +1,6 @@
 import type { CursorState, PlannedItem } from '@/shared/protocol/cursor';
 import type { StepRow } from '@/shared/archive/run-records';
+import type { PositionProof } from '@/shared/rig/position-proof';
 import type { ControllerState, LinkCommand, LinkEvent } from '../interfaces/turntable-link';
 import type { Instant } from '../interfaces/clock';
 
@@ -8,8 +9,11 @@ import type { Instant } from '../interfaces/clock';
  * context is stored as JSON after every transition and is everything a restarted server has to go on.
  */
 
-/** Raised whenever the shape or meaning of the stored context changes; other versions are quarantined. */
-export const CHART_VERSION = 1;
+/**
+ * Raised whenever the shape or meaning of the stored context changes; `stored-snapshot.ts` brings older ones up to it, and versions that
+ * it does not know are quarantined.
+ */
+export const CHART_VERSION = 2;
 
 export type ChartState =
   | 'starting'
@@ -106,6 +110,15 @@ export interface KnownController {
   warningDue?: boolean;
 }
 
+/** What the run knows of how well its counted angles are proved. */
+export interface KnownPosition {
+  proof: PositionProof;
+  /** Dwells since the last good pass of the home edge: to be marked if the next one tells of a slip. */
+  dwells: StepRow[];
+  /** Counts at the passes of the edge in the homing that goes on: the last one in ccw tells how far the count had gone wrong. */
+  homingOffDeg: number | null;
+}
+
 export interface RunContext {
   cursor: CursorState;
   rowCount: number;
@@ -117,6 +130,7 @@ export interface RunContext {
   /** Why the arm no longer holds; null while it does. */
   armVoid: string | null;
   controller: KnownController | null;
+  position: KnownPosition;
   linkUp: boolean;
   /** Since when the link is down; null while it is up. */
   linkDownSinceUtcMs: number | null;

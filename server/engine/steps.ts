@@ -12,12 +12,14 @@ import {
   UnplayableStep,
   waitUntilLocalTime,
 } from '@/shared/protocol/durations';
+import { homingObstacle } from '@/shared/protocol/homing';
 import { pathObstacles } from '@/shared/protocol/motion-path';
 import { stationAt } from '@/shared/protocol/stations';
 import type { RigMotion } from '@/shared/rig/document';
 import type { Instant } from '../interfaces/clock';
-import { countedU, countingToleranceDeg } from './counted-angle';
+import { countingToleranceDeg } from './counted-angle';
 import type { Draft } from './draft';
+import { angleFacts } from './position';
 import type { ActiveStep, Motion, RunContext } from './run-context';
 import { BEGIN_GRACE_MS, LEAD_MS, LEAST_LEAD_MS, MOTION_GRACE_MS } from './timing';
 
@@ -50,8 +52,7 @@ function newRow(draft: Draft, { item, station, endUtcMs }: RowPlan): StepRow {
     angleStartDeg: draft.controller.positionKnown ? moment.angleDeg : null,
     angleEndDeg: null,
     outcome: null,
-    angleSource: 'counted',
-    uAngleDeg: countedU(draft.start.rig),
+    ...angleFacts(draft),
     good: null,
   };
 }
@@ -154,6 +155,12 @@ function beginKind(draft: Draft, item: PlannedItem): void {
 export function beginHome(draft: Draft, item: PlannedItem): void {
   const { context, start } = draft;
   const motionLimits = motionOf(start.rig);
+  const obstacle = homingObstacle(start.rig, draft.controller.positionKnown ? draft.controller.angleDeg : null);
+  if (obstacle !== null) {
+    draft.because('home-refused', `Step ${item.path}: the rig does not home by itself, because ${obstacle}. Turn it to the edge by hand.`);
+    context.next = 'failed';
+    return;
+  }
   const durationMs = 1000 * homeDurationS(start.rig, context.moment.angleDeg);
   const row = newRow(draft, { item, station: stationAt(start.rig, motionLimits.homeDeg), endUtcMs: context.moment.utcMs + durationMs });
   const commandId = draft.command((id) => ({ kind: 'home', id }));

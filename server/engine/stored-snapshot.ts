@@ -1,5 +1,6 @@
 import type { StoredRun } from '../interfaces/run-store';
-import type { Effect, RunSnapshot } from './run-context';
+import { CHART_VERSION, type Effect, type KnownPosition, type RunContext, type RunSnapshot } from './run-context';
+import { nothingKnown } from './position';
 
 /** What the driver performs itself, after it was saved: all but the commands to the controller. */
 export type OwnEffect = Exclude<Effect, { kind: 'link' }>;
@@ -14,7 +15,19 @@ export interface StoredSnapshot extends RunSnapshot {
 
 export const isOwn = (effect: Effect): effect is OwnEffect => effect.kind !== 'link';
 
-export function snapshotIn(stored: StoredRun): RunSnapshot {
-  const { version, state, context } = stored.snapshot as StoredSnapshot;
-  return { version, state, context };
+/** Contexts of version 1 tell nothing of passes of the home edge: the count is unproved until the next one. */
+type OldContext = Omit<RunContext, 'position'> & { position?: KnownPosition };
+
+/** A snapshot of this or an older version in the shape of this one; null where this version cannot read it. */
+export function restored(snapshot: unknown, chartVersion: number): RunSnapshot | null {
+  if (snapshot === null || chartVersion < 1 || chartVersion > CHART_VERSION) return null;
+  const { state, context } = snapshot as Omit<RunSnapshot, 'context'> & { context: OldContext };
+  return { version: CHART_VERSION, state, context: { ...context, position: context.position ?? nothingKnown } };
+}
+
+/** @throws Error when the store holds a snapshot of another version: the supervisor quarantines such runs before. */
+export function snapshotIn({ snapshot, chartVersion }: StoredRun): RunSnapshot {
+  const found = restored(snapshot, chartVersion);
+  if (found === null) throw new Error(`a snapshot of version ${chartVersion} cannot be taken up`);
+  return found;
 }

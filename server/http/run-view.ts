@@ -1,7 +1,7 @@
 import type { RunStart } from '@/shared/archive/run-records';
 import type { RunSummary, RunView } from '@/shared/contracts/runs';
-import { CHART_VERSION, type RunSnapshot } from '../engine/run-context';
 import { factsOf, plannedDwells, type RunFacts } from '../engine/run-facts';
+import { restored } from '../engine/stored-snapshot';
 import { readSteps, type RunListRow, type RunRecord } from '../store/runs-read';
 import { isoOf, isoOrNull } from './maker';
 import type { Services } from './services';
@@ -67,7 +67,7 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
 
 async function factsOfStored(services: Services, run: RunRecord): Promise<RunFacts> {
   const dwellsPlanned = plannedDwells(run.start, run.startedAt ?? run.createdAt);
-  const snapshot = run.chartVersion === CHART_VERSION ? (run.snapshot as RunSnapshot | null) : null;
+  const snapshot = restored(run.snapshot, run.chartVersion);
   if (snapshot !== null)
     return factsOf({
       start: run.start,

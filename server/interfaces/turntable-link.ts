@@ -78,7 +78,8 @@ export type LinkEvent =
   | { kind: 'home-failed'; at: Instant; commandId: string; message: string }
   /** The controller itself says that the turntable stands still after hold or stop `commandId`. */
   | { kind: 'standstill'; at: Instant; commandId: string; angleDeg: number | null }
-  | { kind: 'edge'; at: Instant; angleDeg: number; direction: 'ccw' | 'cw' }
+  /** The home flag changed its level; `angleDeg` is what was counted there (null: position unknown). */
+  | { kind: 'edge'; at: Instant; angleDeg: number | null; direction: 'ccw' | 'cw' }
   | { kind: 'interlock'; at: Instant; closed: boolean }
   | { kind: 'supply'; at: Instant; present: boolean }
   | { kind: 'arm-key'; at: Instant; on: boolean }

@@ -112,11 +112,8 @@ export class LinkTelling {
   happening({ atUs, what }: EventMessage): void {
     const at = this.instant(atUs);
     switch (what.word) {
-      case 'edge': {
-        const angleDeg = this.setting.report.angleOf(what.position);
-        if (angleDeg !== null) this.tell({ kind: 'edge', at, angleDeg, direction: what.direction });
-        return;
-      }
+      case 'edge':
+        return this.tell({ kind: 'edge', at, angleDeg: this.setting.report.angleOf(what.position), direction: what.direction });
       case 'interlock':
         return this.tell({ kind: 'interlock', at, closed: what.closed });
       case 'supply':

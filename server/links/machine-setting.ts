@@ -6,6 +6,8 @@ export interface MachineSetting {
   /** True position at the start, microsteps from the home edge. */
   startSteps: number;
   homed: boolean;
+  /** Play of the drive between the directions, microsteps. */
+  backlashSteps: number;
   /** Whether the warning of SPEC 11.6 is over already at the start. */
   warned: boolean;
   /** Number of starts so far: gives the boot identifier. */

@@ -2,6 +2,7 @@ import { PROTOCOL_VERSION, UNTAUGHT_LIMITS, type BootCause } from '@/firmware-pr
 import type { RigMotion } from '@/shared/rig/document';
 import type { ByteLineFactory } from '../interfaces/byte-line';
 import type { Cancel, Clock } from '../interfaces/clock';
+import type { MachineSetting } from './machine-setting';
 import { degOfSteps, limitsOf, stepsOfDeg } from './rig-units';
 import { SimulatedLine } from './simulated-line';
 import { SimulatedMachine } from './simulated-machine';
@@ -15,6 +16,8 @@ export interface SimulatedControllerOptions {
   startDeg?: number;
   /** Whether the position is known at first; default true. */
   homed?: boolean;
+  /** Play of the drive between the directions, deg; default 0. */
+  backlashDeg?: number;
   /** Whether the 10 s warning before the first motion has been given already; default true. */
   warned?: boolean;
   /** Rate error of the controller's crystal, parts per million; default 18. */
@@ -48,13 +51,27 @@ export interface SimulatedController {
   /** The port disappears, or comes back. */
   unplug(): void;
   plug(): void;
-  /** The belt slips: the count is wrong by so many microsteps from now on. */
+  /** The belt slips: the table moves by so many microsteps (positive ccw), and the count does not. */
   slip(steps: number): void;
 }
 
 const DEFAULT_RATE_PPM = 18;
 const DEFAULT_UPTIME_S = 4321.5;
 const US_PER_MS = 1000;
+
+function settingOf({ rig, seed = 1, ...options }: SimulatedControllerOptions): MachineSetting {
+  return {
+    limits: options.taught === false ? UNTAUGHT_LIMITS : limitsOf(rig),
+    startSteps: stepsOfDeg(rig, options.startDeg ?? rig.homeDeg),
+    homed: options.homed ?? true,
+    backlashSteps: Math.round((options.backlashDeg ?? 0) * rig.stepsPerDegree),
+    warned: options.warned ?? true,
+    bootCount: (seed >>> 0) * 256 + 1,
+    uptimeUs: (options.uptimeS ?? DEFAULT_UPTIME_S) * US_PER_MS * US_PER_MS,
+    version: options.version ?? PROTOCOL_VERSION,
+    firmware: 'simulated',
+  };
+}
 
 /**
  * The light simulated controller: the machine of SPEC.md on an injected clock, behind the same bytes as a real one.
@@ -67,16 +84,7 @@ export function createSimulatedController(options: SimulatedControllerOptions): 
   const usAt = (monotonicMs: number) => (monotonicMs - bornMs) * usPerMs;
   const msAt = (us: number) => bornMs + us / usPerMs;
   const nowUs = () => usAt(clock.monotonicMs());
-  const setting = {
-    limits: options.taught === false ? UNTAUGHT_LIMITS : limitsOf(rig),
-    startSteps: stepsOfDeg(rig, options.startDeg ?? rig.homeDeg),
-    homed: options.homed ?? true,
-    warned: options.warned ?? true,
-    bootCount: (seed >>> 0) * 256 + 1,
-    uptimeUs: (options.uptimeS ?? DEFAULT_UPTIME_S) * US_PER_MS * US_PER_MS,
-    version: options.version ?? PROTOCOL_VERSION,
-    firmware: 'simulated',
-  };
+  const setting = settingOf(options);
   const line = new SimulatedLine({
     clock,
     seed,
@@ -108,7 +116,7 @@ export function createSimulatedController(options: SimulatedControllerOptions): 
 
   return {
     factory: line.factory,
-    trueAngleDegAt: (utcMs) => degOfSteps(rig, machine.motion.track.at(usAt(clock.monotonicMs() + (utcMs - clock.utcMs()))).position),
+    trueAngleDegAt: (utcMs) => degOfSteps(rig, machine.motion.tableAt(usAt(clock.monotonicMs() + (utcMs - clock.utcMs())))),
     openInterlock: () => act((us) => machine.setInput('interlock', false, us)),
     closeInterlock: () => act((us) => machine.setInput('interlock', true, us)),
     loseSupply: () => act((us) => machine.setInput('supply', false, us)),
@@ -120,6 +128,10 @@ export function createSimulatedController(options: SimulatedControllerOptions): 
     freeze: (ms) => line.freeze(ms),
     unplug: () => line.setMissing(true),
     plug: () => line.setMissing(false),
-    slip: (steps) => act(() => machine.motion.slip(steps)),
+    slip: (steps) =>
+      act((us) => {
+        machine.runTo(us);
+        machine.motion.slip(steps, us);
+      }),
   };
 }

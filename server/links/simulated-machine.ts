@@ -58,9 +58,8 @@ export class SimulatedMachine {
     this.warningDue = !setting.warned;
     const emit = (what: Happening, atUs: number) => this.happen(what, atUs);
     this.motion = new SimulatedMotion({
+      ...setting,
       limits: this.limits,
-      startSteps: setting.startSteps,
-      homed: setting.homed,
       emit,
       hindrance: () => this.hindrance(),
     });

@@ -1,4 +1,5 @@
 import type { EndCause, Happening, Limits, MachineState } from '@/firmware-protocol/codec';
+import { Play } from './simulated-play';
 import type { MotionOrder } from './simulated-refusals';
 import { brakeStretches, rampStretches, reachedUs, Track, type Stretch } from './simulated-track';
 
@@ -8,6 +9,8 @@ export interface MotionSetting {
   /** True position at the start, microsteps from the home edge. */
   startSteps: number;
   homed: boolean;
+  /** Play of the drive between the directions, microsteps. */
+  backlashSteps: number;
   emit: (what: Happening, atUs: number) => void;
   /** SPEC 8.2: tested again at the first step; null when the motion may begin. */
   hindrance: () => EndCause | null;
@@ -34,7 +37,7 @@ const TINY_STEPS = 1e-6;
 
 /**
  * The moving part of the simulated controller: trapezoids, braking, homing, the home flag (SPEC 8, 9, 11.4). The flag
- * covers all places below true position 0. What is counted may differ from what is true by `zero`.
+ * covers all places of the table below 0. The motor is what is counted, from `zero`; between motor and table there is `play`.
  */
 export class SimulatedMotion {
   readonly track: Track;
@@ -44,10 +47,12 @@ export class SimulatedMotion {
   /** SPEC 3.8: tag of the last order accepted since the start. */
   lastTag: string | null = null;
   private zero = 0;
+  private readonly play: Play;
   private active: Active | null = null;
 
   constructor(private readonly setting: MotionSetting) {
     this.track = new Track(setting.startSteps);
+    this.play = new Play(setting.backlashSteps);
     this.known = setting.homed;
     this.driversOn = setting.homed;
     this.covered = setting.startSteps < 0;
@@ -131,9 +136,17 @@ export class SimulatedMotion {
     this.release();
   }
 
-  /** The count is wrong by so many steps from now on, as after a slipped belt. */
-  slip(steps: number): void {
-    this.zero += steps;
+  /** The belt slips: the table moves by so many steps, and no count tells it but the one at the edge. */
+  slip(steps: number, us: number): void {
+    this.play.slip(us, this.track.at(us).position, steps);
+    const table = this.tableAt(us);
+    if (this.covered ? table > -TINY_STEPS : table < TINY_STEPS - 1) this.changeFlag(us, this.position(us));
+    if (this.active !== null) this.active.edgeUs = this.nextEdgeUs(this.active.leg);
+  }
+
+  /** Where the table truly is, microsteps from the home edge. */
+  tableAt(us: number): number {
+    return this.play.tableAt(us, this.track.at(us).position);
   }
 
   private steps(us: number): number {
@@ -171,6 +184,8 @@ export class SimulatedMotion {
   private setLeg(active: Active, us: number, leg: Stretch[]): void {
     this.track.cut(us, this.track.at(us).position);
     this.track.add(leg);
+    const [first] = leg;
+    if (first !== undefined) this.play.turn(us, first.from, first.to < first.from ? -1 : 1);
     active.leg = leg;
     active.endUs = leg.at(-1)?.toUs ?? us;
     active.edgeUs = this.nextEdgeUs(leg);
@@ -181,23 +196,33 @@ export class SimulatedMotion {
     const last = leg.at(-1);
     if (first === undefined || last === undefined) return null;
     const up = last.to > first.from;
-    if (this.covered && up && last.to >= 0) return reachedUs(leg, 0);
-    if (!this.covered && !up && last.to <= -1) return reachedUs(leg, -1);
-    return null;
+    if (up !== this.covered) return null;
+    const place = this.edgePlace();
+    return up ? (last.to >= place ? reachedUs(leg, place) : null) : last.to <= place ? reachedUs(leg, place) : null;
+  }
+
+  /** Motor position at which the flag changes its level next. */
+  private edgePlace(): number {
+    return this.covered ? this.play.motorFor(0, 1) : this.play.motorFor(-1, -1);
   }
 
   private passEdge(active: Active, us: number): void {
-    this.covered = !this.covered;
+    const place = this.edgePlace();
     active.edgeUs = null;
-    const at = this.covered ? -1 : 0;
-    this.setting.emit({ word: 'edge', position: this.known ? at - this.zero : null, direction: this.covered ? 'cw' : 'ccw' }, us);
+    this.changeFlag(us, this.known ? place - this.zero : null);
     if (active.state !== 'homing' || active.homing !== 'search') return;
     active.homing = 'past';
     this.setLeg(active, us, brakeStretches(this.track.at(us), active.acceleration, us));
   }
 
+  private changeFlag(us: number, position: number | null): void {
+    this.covered = !this.covered;
+    this.setting.emit({ word: 'edge', position, direction: this.covered ? 'cw' : 'ccw' }, us);
+  }
+
   private endLeg(active: Active): void {
     const us = active.endUs;
+    const edge = this.play.motorFor(0, 1);
     if (active.state !== 'homing') return this.finish(active, us, active.cause);
     switch (active.homing) {
       case 'search':
@@ -205,13 +230,17 @@ export class SimulatedMotion {
         return this.finish(active, us, 'search');
       case 'past':
         active.homing = 'below';
-        return this.setLeg(active, us, this.homeRamp(-(Math.abs(this.steps(us)) + CLEARANCE_STEPS), us));
+        return this.setLeg(
+          active,
+          us,
+          this.homeRamp(edge - this.setting.backlashSteps - Math.abs(this.steps(us) - edge) - CLEARANCE_STEPS, us),
+        );
       case 'below':
         active.homing = 'edge';
-        return this.setLeg(active, us, this.homeRamp(0, us));
+        return this.setLeg(active, us, this.homeRamp(edge, us));
       case 'edge':
-        this.setting.emit({ word: 'homed', tag: active.order.tag, position: this.known ? 0 - this.zero : null }, us);
-        this.zero = 0;
+        this.setting.emit({ word: 'homed', tag: active.order.tag, position: this.known ? edge - this.zero : null }, us);
+        this.zero = edge;
         this.known = true;
         this.finish(active, us, 'done');
     }

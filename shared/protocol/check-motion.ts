@@ -2,6 +2,7 @@ import type { RigDocument, RigMotion } from '../rig/document';
 import type { DwellStep, KickStep, ProtocolDocument, Step, SwingStep, SwingTarget } from './document';
 import { swingMove } from './durations';
 import type { Finding } from './finding';
+import { homingObstacle } from './homing';
 import { degrees, pathObstacles } from './motion-path';
 import { resolveTarget } from './stations';
 
@@ -129,6 +130,9 @@ function refuse({ walk, path }: At, code: string, message: string): void {
 function checkHome(before: Situation, at: At): Situation {
   const motion = at.walk.rig.motion;
   if (motion === undefined) return { angleDeg: null, swingS: null };
+  const isLost = at.walk.isLost && before.angleDeg === null;
+  const unsafe = isLost ? homingObstacle(at.walk.rig, null) : null;
+  if (unsafe !== null) refuse(at, 'home-refused', `The rig does not home by itself, because ${unsafe}. Turn it to the edge by hand.`);
   for (const { code, reason } of pathObstacles(motion, before.angleDeg ?? motion.homeDeg, motion.homeDeg)) {
     refuse(
       at,

@@ -163,7 +163,7 @@ export class FakeLink implements TurntableLink {
     this.say({ kind: 'lease-lapsed', at: this.at() });
   }
 
-  edge(angleDeg: number, direction: 'ccw' | 'cw'): void {
+  edge(angleDeg: number | null, direction: 'ccw' | 'cw'): void {
     this.say({ kind: 'edge', at: this.at(), angleDeg, direction });
   }
 
@@ -234,6 +234,7 @@ export class FakeLink implements TurntableLink {
     }
     this.clock.after(5, () => {
       this.endMotion(command.kind);
+      if (command.kind === 'stop' && command.releaseDrivers) this.angleDeg = null;
       this.clock.after(10, () => this.confirm(command.id));
     });
   }

@@ -114,13 +114,4 @@ describe('other steps', () => {
     expect(bench.driver.facts()).toMatchObject({ state: 'failed', reason: expect.stringContaining('motion.maxDeg') });
     expect(bench.link.motions).toHaveLength(2);
   });
-
-  test('a pass of the home edge is logged and proves the angle of the swing', async () => {
-    const bench = await underWay(70);
-    bench.link.edge(0.004, 'cw');
-    await bench.pass(100);
-    expect(bench.store.events.find(({ kind }) => kind === 'home-edge')?.data).toMatchObject({ angleDeg: 0.004, direction: 'cw' });
-    expect(bench.store.log()[4]).toMatchObject({ kind: 'swing', angleSource: 'edge-verified' });
-    expect(bench.store.log()[1]).toMatchObject({ kind: 'swing', angleSource: 'counted' });
-  });
 });

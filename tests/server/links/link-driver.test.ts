@@ -113,8 +113,9 @@ describe('motions', () => {
     await clock.advance(9_900);
     expect(kinds()).toEqual(['ready', 'accepted']);
     await clock.advance(10_000);
+    expect(kinds()).toEqual(['ready', 'accepted', 'motion-began', 'edge', 'edge', 'homed']);
     // While the position is unknown a pass of the edge has no angle to tell.
-    expect(kinds()).toEqual(['ready', 'accepted', 'motion-began', 'homed']);
+    expect(last(told, 'edge')).toMatchObject({ angleDeg: null, direction: 'ccw' });
     expect(last(told, 'homed')).toMatchObject({ commandId: 'home', angleDeg: 0 });
     expect(link.controller()).toMatchObject({ positionKnown: true, angleDeg: 0, moving: false, driversOn: true });
   });

@@ -13,11 +13,12 @@ export class MachinePeer {
   nowMs = 0;
   private tags = 0;
 
-  constructor(options: { homed?: boolean; warned?: boolean; startSteps?: number } = {}) {
+  constructor(options: { homed?: boolean; warned?: boolean; startSteps?: number; backlashSteps?: number } = {}) {
     const setting = {
       limits,
       startSteps: options.startSteps ?? 0,
       homed: options.homed ?? true,
+      backlashSteps: options.backlashSteps ?? 0,
       warned: options.warned ?? true,
       bootCount: 0x1a2b,
       uptimeUs: 60e6,

@@ -80,7 +80,7 @@ describe('home and its flag (SPEC 8.6, 11.4)', () => {
 
   test('tells how far the count had gone wrong', () => {
     const peer = new MachinePeer().greet();
-    peer.machine.motion.slip(4);
+    peer.machine.motion.slip(4, peer.us);
     peer.ask({ word: 'home', tag: peer.tag() });
     peer.passRenewing(10_000);
     expect(peer.events().find(({ what }) => what.word === 'homed')).toMatchObject({ what: { position: -4 } });
@@ -94,6 +94,49 @@ describe('home and its flag (SPEC 8.6, 11.4)', () => {
       peer.passRenewing(6_000);
     }
     expect(peer.happened().filter((what) => what.startsWith('edge'))).toEqual(['edge -1 cw', 'edge 0 ccw']);
+  });
+});
+
+describe('what lies between motor and table', () => {
+  const edges = (peer: MachinePeer) => peer.happened().filter((what) => what.startsWith('edge'));
+
+  test('with play, clockwise passes are counted later by it, and the table is ahead by it', () => {
+    const peer = new MachinePeer({ backlashSteps: 5 }).greet();
+    for (const position of [500, -500, 500]) {
+      peer.ask(peer.move(position));
+      peer.passRenewing(6_000);
+      const { motion } = peer.machine;
+      expect(motion.tableAt(peer.us)).toBe(position + (position < 0 ? 5 : 0));
+    }
+    expect(edges(peer)).toEqual(['edge -6 cw', 'edge 0 ccw']);
+  });
+
+  test('with play, homing still ends at the edge met counter-clockwise', () => {
+    const peer = new MachinePeer({ backlashSteps: 5, homed: false, startSteps: 300 }).greet();
+    peer.ask({ word: 'home', tag: peer.tag() });
+    peer.passRenewing(20_000);
+    expect(peer.status()).toMatchObject({ state: 'rest', position: 0 });
+    expect(peer.machine.motion.tableAt(peer.us)).toBe(0);
+  });
+
+  test('a slip moves the table and not the count, until the next pass of the edge tells', () => {
+    const peer = new MachinePeer().greet();
+    peer.ask(peer.move(500));
+    peer.passRenewing(6_000);
+    peer.machine.motion.slip(30, peer.us);
+    expect(peer.status().position).toBe(500);
+    expect(peer.machine.motion.tableAt(peer.us)).toBe(530);
+    peer.ask(peer.move(-500));
+    peer.passRenewing(6_000);
+    expect(edges(peer)).toEqual(['edge -31 cw']);
+    expect(peer.status().position).toBe(-500);
+  });
+
+  test('a slip over the edge is a pass of it', () => {
+    const peer = new MachinePeer().greet();
+    peer.machine.motion.slip(-3, peer.us);
+    peer.machine.motion.slip(4, peer.us);
+    expect(edges(peer)).toEqual(['edge 0 cw', 'edge 0 ccw']);
   });
 });
 

@@ -1,0 +1,47 @@
+import type { LinkEvent } from '../interfaces/turntable-link';
+
+/**
+ * Why what the controller says ends the arm of its rig, run or no run; null where it does not. Whatever lets people or surprises into the
+ * room does, and so does the loss of the position: homing after it needs a person at the rig and a new arm.
+ * @param wasKnown whether the position was known before this event
+ */
+export function endOfArm(event: LinkEvent, wasKnown: boolean): string | null {
+  switch (event.kind) {
+    case 'interlock':
+      return event.closed ? null : 'the interlock was opened';
+    case 'supply':
+      return event.present ? null : 'the motor supply was lost';
+    case 'reset':
+      return 'the controller restarted';
+    case 'standstill':
+      return wasKnown && event.angleDeg === null ? positionLost : null;
+    case 'ready': {
+      const { controller } = event;
+      if (!controller.interlockClosed) return 'the interlock is open';
+      if (!controller.supplyPresent) return 'the motor supply is off';
+      return wasKnown && !controller.positionKnown ? positionLost : null;
+    }
+    default:
+      return null;
+  }
+}
+
+const positionLost = 'the position was lost';
+
+/** Whether the position is known after an event, as far as it tells. */
+export function knownAfter(event: LinkEvent, before: boolean): boolean {
+  switch (event.kind) {
+    case 'ready':
+      return event.controller.positionKnown;
+    case 'homed':
+      return true;
+    case 'standstill':
+      return event.angleDeg !== null;
+    case 'supply':
+      return before && event.present;
+    case 'reset':
+      return false;
+    default:
+      return before;
+  }
+}

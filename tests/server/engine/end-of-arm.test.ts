@@ -1,0 +1,46 @@
+import { endOfArm, knownAfter } from '@/server/engine/end-of-arm';
+import type { ControllerState, LinkEvent } from '@/server/interfaces/turntable-link';
+
+const at = { utcMs: 0, uS: 0 };
+const controller: ControllerState = {
+  bootId: 'boot-1',
+  firmware: 'fake',
+  positionKnown: true,
+  angleDeg: 0,
+  moving: false,
+  interlockClosed: true,
+  supplyPresent: true,
+  armKey: true,
+  driversOn: true,
+  warningDue: false,
+};
+const ready = (more: Partial<ControllerState> = {}): LinkEvent => ({
+  kind: 'ready',
+  at,
+  sameBoot: true,
+  controller: { ...controller, ...more },
+});
+const lost = { positionKnown: false, angleDeg: null };
+
+describe('what ends the arm of a rig, run or no run', () => {
+  test.each<[string, LinkEvent]>([
+    ['the controller restarted', { kind: 'reset', at, bootId: 'boot-2' }],
+    ['the motor supply was lost', { kind: 'supply', at, present: false }],
+    ['the interlock was opened', { kind: 'interlock', at, closed: false }],
+    ['the position was lost', { kind: 'standstill', at, commandId: 'stop-1', angleDeg: null }],
+    ['the position was lost', ready(lost)],
+  ])('%s', (why, event) => expect(endOfArm(event, true)).toBe(why));
+
+  test('a rig that was never homed may be armed for homing, and the arm outlives a short gap of the line', () => {
+    expect(endOfArm(ready(lost), false)).toBeNull();
+    expect(endOfArm(ready(), true)).toBeNull();
+  });
+
+  test('the position is known from homing until it is lost', () => {
+    expect(knownAfter({ kind: 'homed', at, commandId: 'home-1', angleDeg: 0 }, false)).toBe(true);
+    expect(knownAfter({ kind: 'lost', at, why: '' }, true)).toBe(true);
+    expect(knownAfter({ kind: 'supply', at, present: false }, true)).toBe(false);
+    expect(knownAfter({ kind: 'supply', at, present: true }, false)).toBe(false);
+    expect(knownAfter({ kind: 'reset', at, bootId: 'boot-2' }, true)).toBe(false);
+  });
+});

@@ -1,0 +1,31 @@
+import { homingObstacle } from '@/shared/protocol/homing';
+import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
+import type { RigDocument } from '@/shared/rig/document';
+
+const with_ = (rig: RigDocument, motion: Partial<NonNullable<RigDocument['motion']>>): RigDocument => ({
+  ...rig,
+  motion: { ...(rig.motion as NonNullable<RigDocument['motion']>), ...motion },
+});
+
+describe('whether a rig may home by itself', () => {
+  test('one without keep-out arcs may, from anywhere', () => {
+    expect(homingObstacle(demoRigWide, null)).toBeNull();
+    expect(homingObstacle(with_(demoRigWide, { homeDeg: 170 }), null)).toBeNull();
+  });
+
+  test('one with arcs may when the edge lies between near and far and no arc lies in the travel', () => {
+    expect(homingObstacle(demoRigNarrow, null)).toBeNull();
+  });
+
+  test('an edge that is not between near and far does not tell which way is safe', () => {
+    expect(homingObstacle(with_(demoRigNarrow, { homeDeg: 31 }), null)).toMatch(/31°\) does not lie between near and far/);
+    expect(homingObstacle(with_(demoRigNarrow, { homeDeg: 31 }), 60)).toBeNull();
+  });
+
+  test('an arc within the travel may lie on the way from an unknown place, and is named', () => {
+    const rig = with_(demoRigWide, { keepOut: [[100, 110]] });
+    expect(homingObstacle(rig, null)).toMatch(/not free: it meets the keep-out arc 100° to 110°/);
+    expect(homingObstacle(rig, 90)).toBeNull();
+    expect(homingObstacle(rig, 120)).toMatch(/from 120° to the edge is not free/);
+  });
+});
