@@ -42,6 +42,7 @@ const present = {
   postgresql: () => findPostgres() !== null && onPath('psql'),
   chromium: () => onPath('chromium'),
   socat: () => onPath('socat'),
+  'g++': () => onPath('g++'),
   'gcc-avr': () => onPath('avr-g++'),
   'avr-libc': () => existsSync('/usr/lib/avr/include/avr/io.h'),
 };

@@ -1,5 +1,6 @@
-import { mkdirSync, readdirSync, rmSync } from 'node:fs';
-import { join } from 'node:path';
+import { createHash } from 'node:crypto';
+import { existsSync, mkdirSync, readdirSync, readFileSync, renameSync, rmSync } from 'node:fs';
+import { dirname, join } from 'node:path';
 import { outside, root } from './paths.mjs';
 import { must } from './run.mjs';
 
@@ -18,13 +19,16 @@ const BOARD = [
   '-frandom-seed=evenfall',
 ];
 
-const sources = (...folders) =>
+/** Errors that memory or arithmetic would hide end the program. */
+const HOST = ['-O1', '-g', '-fsanitize=address,undefined', '-fno-sanitize-recover=all'];
+
+const filesIn = (...folders) =>
   folders.flatMap((folder) =>
     readdirSync(join(firmwareFolder, folder))
-      .filter((name) => name.endsWith('.cpp'))
       .sort()
       .map((name) => `${folder}/${name}`),
   );
+const sources = (...folders) => filesIn(...folders).filter((name) => name.endsWith('.cpp'));
 
 /** An empty folder outside the project for what a build leaves. */
 function buildFolder(name) {
@@ -42,6 +46,19 @@ export async function buildBoard() {
   await must('avr-g++', [...BOARD, ...COMMON, ...sources('core', 'board'), '-o', elf], { cwd: firmwareFolder });
   await must('avr-objcopy', ['-O', 'ihex', '-R', '.eeprom', elf, hex]);
   return { elf, hex };
+}
+
+/** The core as a program for tests, built when its sources changed. Gives its path. */
+export async function ensureHostBuild() {
+  const hash = createHash('sha256').update(HOST.join(' '));
+  for (const name of filesIn('core', 'hal', 'host')) hash.update(name).update(readFileSync(join(firmwareFolder, name)));
+  const program = join(outside, `firmware-host-${hash.digest('hex').slice(0, 12)}`);
+  if (existsSync(program)) return program;
+  const made = join(buildFolder(`host-${process.pid}`), 'program');
+  await must('g++', [...HOST, ...COMMON, ...sources('core', 'host'), '-o', made], { cwd: firmwareFolder });
+  renameSync(made, program);
+  rmSync(dirname(made), { recursive: true });
+  return program;
 }
 
 /** Flash and static memory in bytes. */

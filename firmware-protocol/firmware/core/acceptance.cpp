@@ -58,6 +58,8 @@ Code whenToBegin(const Request& request, Tick now, uint32_t& detail) {
     default:
       break;
   }
+  Tick settled;
+  if (stepper::settling(now, settled) && !reached(settled, active.begin)) return refuse(Code::past, detail, 1);
   if (body.warningDue && between(now, active.begin) < static_cast<int32_t>(WARNING_TICKS))
     return refuse(Code::warning, detail, WARNING_MS);
   return Code::none;

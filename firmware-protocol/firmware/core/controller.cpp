@@ -23,13 +23,6 @@ const char LIM[] FLASH = "lim ";
 
 uint16_t dropped;
 
-/** A reply while it is composed. */
-struct Answer {
-  char line[MAX_LINE];
-  Writer writer;
-  Answer() : writer(line) {}
-};
-
 /** SPEC 5.1. T3 is taken here, before anything is composed. */
 void head(Writer& writer, const Request& request, Tick received) {
   const uint32_t turn = (hal::ticks() - received) / 2;
@@ -117,7 +110,6 @@ void lim(Writer& writer) {
 
 /** SPEC 8.10. */
 Code teach(const Request& request, uint32_t& detail) {
-  if (request.place >= request.greatest || request.home > request.speed) return Code::field;
   if (motion::state() == State::fault) {
     detail = static_cast<uint32_t>(motion::fault());
     return Code::fault;
@@ -155,17 +147,18 @@ Code carryOut(const Request& request, Tick received, uint32_t& detail) {
   }
 }
 
-uint8_t seal(Answer& answer) {
-  const uint8_t length = answer.writer.seal();
-  hal::send(answer.line, length);
+uint8_t sendSealed(Writer& writer, const char* text) {
+  const uint8_t length = writer.seal();
+  hal::send(text, length);
   return length;
 }
 
 void refuse(const Request& request, Tick received, Code code, uint32_t detail) {
-  Answer answer;
-  head(answer.writer, request, received);
-  no(answer.writer, code, detail);
-  seal(answer);
+  char text[MAX_LINE];
+  Writer writer(text);
+  head(writer, request, received);
+  no(writer, code, detail);
+  sendSealed(writer, text);
 }
 
 void sendStored() { hal::send(session::storedReply(), session::storedLength()); }
@@ -182,15 +175,16 @@ void answerSession(const Request& request, const Line& line, uint8_t length) {
       break;
   }
   code = request.unusable != Code::none ? request.unusable : carryOut(request, line.received, detail);
-  Answer answer;
-  head(answer.writer, request, line.received);
+  char text[MAX_LINE];
+  Writer writer(text);
+  head(writer, request, line.received);
   if (code != Code::none)
-    no(answer.writer, code, detail);
+    no(writer, code, detail);
   else if (request.order == Order::limits || request.order == Order::teach)
-    lim(answer.writer);
+    lim(writer);
   else
-    ok(answer.writer);
-  session::keep(request, line.text, length, answer.line, seal(answer));
+    ok(writer);
+  session::keep(request, line.text, length, text, sendSealed(writer, text));
   if (request.order == Order::events && code == Code::none) events::sendAgain(request.from);
 }
 
@@ -204,10 +198,11 @@ void obeyStop(const Request& request, const Line& line, uint8_t length) {
     motion::brake(Cause::hold, false);
   else
     motion::stop(request.free);
-  Answer answer;
-  head(answer.writer, request, line.received);
-  ok(answer.writer);
-  session::keep(request, line.text, length, answer.line, seal(answer));
+  char text[MAX_LINE];
+  Writer writer(text);
+  head(writer, request, line.received);
+  ok(writer);
+  session::keep(request, line.text, length, text, sendSealed(writer, text));
 }
 
 void hello(const Request& request, Tick received) {
@@ -215,17 +210,19 @@ void hello(const Request& request, Tick received) {
   const uint32_t opened = session::open(request.epoch);
   if (opened == 0) return refuse(request, received, Code::epoch, memory::highestEpoch());
   motion::newSession();
-  Answer answer;
-  head(answer.writer, request, received);
-  hi(answer.writer, opened);
-  seal(answer);
+  char text[MAX_LINE];
+  Writer writer(text);
+  head(writer, request, received);
+  hi(writer, opened);
+  sendSealed(writer, text);
 }
 
 void ident(const Request& request, Tick received) {
-  Answer answer;
-  head(answer.writer, request, received);
-  hi(answer.writer, 0);
-  seal(answer);
+  char text[MAX_LINE];
+  Writer writer(text);
+  head(writer, request, received);
+  hi(writer, 0);
+  sendSealed(writer, text);
 }
 
 void obey(const Request& request, const Line& line) {

@@ -31,19 +31,20 @@ void cancel(Cause cause) {
   Launch launch;
   {
     hal::Lock lock;
-    hal::disarm();
     launch = active.launch;
     active.launch = Launch::none;
+    if (launch == Launch::armed) hal::disarm();
   }
-  // The first step was let go a few microseconds ago: then it is a motion that is braked.
   if (launch == Launch::begun) {
-    begun(active.begin);
     stepper::brake(false);
-    active.state = State::braking;
-    active.cause = cause;
-    return;
+    // The first step was made a few microseconds ago: then it is a motion that is braked.
+    if (stepper::phase() == stepper::Phase::running || stepper::position() != active.from) {
+      begun(active.begin);
+      active.state = State::braking;
+      active.cause = cause;
+      return;
+    }
   }
-  stepper::rest();
   finish(cause, hal::ticks());
 }
 
@@ -59,7 +60,7 @@ void pollWaiting(Tick now) {
     hal::Lock lock;
     launch = active.launch;
   }
-  if (launch == Launch::begun) return begun(active.begin);
+  if (launch == Launch::begun) return reached(active.begin, now) ? begun(active.begin) : hal::wakeAt(active.begin);
   if (launch == Launch::refused) finish(active.cause, hal::ticks());
 }
 
@@ -236,8 +237,11 @@ void poll(Tick now) {
     case State::homing:
     case State::braking:
       return pollMotion();
-    default:
-      return;
+    default: {
+      // Only so that an instant long ago is not mistaken for one to come when the ticks wrap.
+      Tick settled;
+      stepper::settling(now, settled);
+    }
   }
 }
 

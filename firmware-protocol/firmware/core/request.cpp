@@ -42,7 +42,8 @@ bool readTeach(Fields& fields, Request& request) {
   if (!fields.next(least) || !fields.next(greatest) || !fields.next(speed) || !fields.next(acceleration) || !fields.next(home))
     return false;
   return readPosition(least, request.place) && readPosition(greatest, request.greatest) && readRate(speed, request.speed) &&
-         readRate(acceleration, request.acceleration) && readRate(home, request.home);
+         readRate(acceleration, request.acceleration) && readRate(home, request.home) && request.place < request.greatest &&
+         request.home <= request.speed;
 }
 
 bool readEvents(Fields& fields, Request& request) {

@@ -1,5 +1,7 @@
 #include "stepper.hpp"
 
+#include "clock.hpp"
+
 namespace core {
 namespace stepper {
 
@@ -12,6 +14,7 @@ struct {
   Phase phase;
   bool edgeStops;
   bool guardMet;
+  bool settling;
   int8_t direction;
   int32_t count;
   int32_t guard;
@@ -22,6 +25,7 @@ struct {
   /** The interval in progress. */
   uint32_t current;
   Tick last;
+  Tick settled;
   /** For `brake(true)`: first interval at the cap, and acceleration by cap. */
   uint32_t steepFirst;
   uint32_t steepRatio;
@@ -42,6 +46,7 @@ void start() {
   leg.count = 0;
   leg.edgeStops = false;
   leg.guardMet = false;
+  leg.settling = false;
 }
 
 void prepare(const Leg& wish) {
@@ -71,7 +76,8 @@ void goAt(Tick at) {
 
 Tick go(Tick delay) {
   hal::Lock lock;
-  goAt(hal::ticks() + 2 * hal::LEAD + delay);
+  const Tick soonest = hal::ticks() + 2 * hal::LEAD + delay;
+  goAt(leg.settling && !reached(leg.settled, soonest) ? leg.settled : soonest);
   return leg.last;
 }
 
@@ -134,10 +140,19 @@ bool metGuard() {
 
 void rest() { leg.phase = Phase::idle; }
 
+bool settling(Tick now, Tick& until) {
+  hal::Lock lock;
+  until = leg.settled;
+  if (leg.settling && !active() && reached(leg.settled, now)) leg.settling = false;
+  return leg.settling;
+}
+
 void counted() {
   leg.count += leg.direction;
   leg.remaining -= 1;
   leg.last += leg.current;
+  leg.settling = true;
+  leg.settled = leg.last + leg.ramp.first;
   if (leg.count == leg.guard) leg.guardMet = true;
   if (leg.remaining == 0) leg.phase = Phase::done;
 }

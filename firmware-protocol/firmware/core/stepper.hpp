@@ -24,7 +24,7 @@ enum class Phase : uint8_t { idle, armed, running, done, cut };
 void start();
 /** Computes a leg; a few ms. Nothing may be running. */
 void prepare(const Leg& leg);
-/** First step as soon as can be, `delay` ticks later. Gives its tick. */
+/** First step as soon as can be, `delay` ticks later at least. Gives its tick. */
 Tick go(Tick delay = 0);
 /** First step at `at` to the tick. Under a lock, or in an interrupt. */
 void goAt(Tick at);
@@ -48,6 +48,11 @@ Tick lastStep();
 bool metGuard();
 /** After `done`. */
 void rest();
+/**
+ * A table that has just made its last step needs the first interval of a ramp before it may turn back: both together are no
+ * steeper than the ramp (SPEC 8.1). True while that lasts, until `until`.
+ */
+bool settling(Tick now, Tick& until);
 
 /** In the step interrupt: the step that was armed has been made. */
 void counted();
