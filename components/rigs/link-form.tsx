@@ -11,7 +11,14 @@ interface LinkFormProps {
 
 const usualBaud = 115_200;
 
-/** Simulated controller, or a serial line by its path and speed. What was typed for the line survives a look at the other choice. */
+const insideServer = {
+  board:
+    'The firmware of the controller on a board that the server emulates, with a turntable and a pendulum that answer to it. It behaves as a real board does: its position is unknown after a reset, and it is homed by a person at the rig.',
+  simulated:
+    'A light stand-in for a controller inside the server, with the same line protocol and limits, and a pendulum that answers to it. For learning, rehearsing and tests.',
+};
+
+/** A controller inside the server, or a serial line by its path and speed. What was typed for the line survives a look at the other choice. */
 export function LinkForm({ link, onChange, errors }: LinkFormProps) {
   const [path, setPath] = useState(link.kind === 'serial' ? link.path : '');
   const [baud, setBaud] = useState(String(link.kind === 'serial' ? link.baudRate : usualBaud));
@@ -28,16 +35,14 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
         label="Kind of link"
         value={link.kind}
         options={[
+          { value: 'board', label: 'Emulated board' },
           { value: 'simulated', label: 'Simulated' },
           { value: 'serial', label: 'Serial line' },
         ]}
-        onChange={(kind) => (kind === 'simulated' ? onChange({ kind }) : serial({}))}
+        onChange={(kind) => (kind === 'serial' ? serial({}) : onChange({ kind }))}
       />
-      {link.kind === 'simulated' ? (
-        <Label>
-          A controller inside the server, with the same line protocol and limits, and a pendulum that answers to it. For learning,
-          rehearsing and tests.
-        </Label>
+      {link.kind !== 'serial' ? (
+        <Label>{insideServer[link.kind]}</Label>
       ) : (
         <>
           <Field

@@ -28,5 +28,7 @@ export function linkState(live: RigLive): LinkState {
   }
 }
 
-export const linkName = (link: LinkSettings): string =>
-  link.kind === 'simulated' ? 'Simulated controller' : `${link.path}, ${link.baudRate} baud`;
+export function linkName(link: LinkSettings): string {
+  if (link.kind === 'simulated') return 'Simulated controller';
+  return link.kind === 'board' ? 'Emulated controller board' : `${link.path}, ${link.baudRate} baud`;
+}

@@ -1,21 +1,19 @@
-import { randomBytes, randomUUID } from 'node:crypto';
-import { join } from 'node:path';
+import { randomUUID } from 'node:crypto';
 import type { Logger } from 'pino';
 import { endOfArm, knownAfter } from '../engine/end-of-arm';
 import { GuidedMoves } from '../engine/guided-moves';
 import { RigSupervisor } from '../engine/rig-supervisor';
 import { sha256Hex } from '../evaluation/sha256';
-import type { RigStation, StationRig } from '../interfaces/rig-stations';
+import type { RigStation } from '../interfaces/rig-stations';
 import type { SampleStore } from '../interfaces/sample-store';
 import type { LinkEvent } from '../interfaces/turntable-link';
 import { createRunStore } from '../store/run-store';
-import { ApparatusMemory } from './apparatus-memory';
 import { MemoryArmKeeper } from './arm-keeper';
 import type { Background } from './background';
 import type { BuildParts } from './build-parts';
 import { LeaseKeeper } from './lease-keeper';
+import { RigApparatus } from './rig-apparatus';
 import { ServerRigStations } from './rig-stations';
-import { SimulatedApparatus } from './simulated-apparatus';
 
 const engineItself = { id: null, name: 'the run engine' };
 const shortestLeaseMs = 3_000;
@@ -26,6 +24,7 @@ export interface RigSide {
   stations: ServerRigStations;
   supervisor: RigSupervisor;
   guided: GuidedMoves;
+  apparatus: RigApparatus;
 }
 
 /** All that has to do with the rigs: who may move them, their lines, and the engine that drives runs. */
@@ -43,14 +42,12 @@ export function buildRigSide(
     leaseMs: Math.max(shortestLeaseMs, overrides.paceMs ?? 0),
     onLost: letGo,
   });
+  const apparatus = new RigApparatus(parts, log);
   const stations = new ServerRigStations({
-    database,
-    samples,
-    clock,
-    log,
+    ...{ database, samples, clock, log },
     paceMs: overrides.paceMs ?? 0,
     epochOf: (rig) => leases.epochOf(rig),
-    apparatusOf: apparatusMaker(parts),
+    apparatusOf: (rig) => apparatus.of(rig),
     onLinkEvent: heedLink,
   });
   const supervisor: RigSupervisor = new RigSupervisor({
@@ -94,29 +91,5 @@ export function buildRigSide(
     guided.heard(station.rigId, event);
   }
 
-  return { arms, leases, stations, supervisor, guided };
-}
-
-/** The simulated turntable of a rig: one for the life of this server, or one that is handed in and lives longer. */
-function apparatusMaker({ clock, config, overrides = {} }: BuildParts): (rig: StationRig) => SimulatedApparatus {
-  const memory = config.mode === 'test' ? null : new ApparatusMemory(join(config.stateDir, 'simulated'));
-  const made = new Map<string, { key: string; apparatus: SimulatedApparatus }>();
-  return (rig) => {
-    const { motion } = rig.document;
-    if (motion === undefined) throw new Error('a simulated rig needs motion data');
-    const key = JSON.stringify(rig.document);
-    const known = made.get(rig.id);
-    if (known?.key === key) return known.apparatus;
-    const controller = overrides.controllerOf?.(rig);
-    const apparatus = new SimulatedApparatus({
-      clock,
-      rigId: rig.id,
-      document: { ...rig.document, motion },
-      seed: randomBytes(3).readUIntBE(0, 3),
-      memory,
-      ...(controller === undefined ? {} : { controller }),
-    });
-    made.set(rig.id, { key, apparatus });
-    return apparatus;
-  };
+  return { arms, leases, stations, supervisor, guided, apparatus };
 }

@@ -95,6 +95,7 @@ class Life {
     await inside.closeTasks();
     await Promise.all([crewStopped, this.ticks?.stop()]);
     await inside.stations.close();
+    await inside.apparatus.end();
     inside.arms.close();
     await inside.background.idle();
     await inside.leases.close();

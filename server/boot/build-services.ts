@@ -46,7 +46,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   const nowUtcMs = () => clock.utcMs();
   const samples = createSampleStore(database);
   const sessions = createSessions({ db: database.db, clock, newToken, sha256: sha256Hex });
-  const { arms, leases, stations, supervisor, guided } = buildRigSide(parts, {
+  const { arms, leases, stations, supervisor, guided, apparatus } = buildRigSide(parts, {
     ...{ log, background, samples },
     onLine: (rigId) => lines.changed(rigId),
   });
@@ -85,7 +85,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   );
   return {
     services,
-    inside: { leases, arms, stations, crew, background, tellTakenUp: takenUp.resolve, closeTasks: async () => workers?.close() },
+    inside: { leases, arms, stations, apparatus, crew, background, tellTakenUp: takenUp.resolve, closeTasks: async () => workers?.close() },
   };
 }
 

@@ -57,7 +57,7 @@ export class ServerRigStations implements RigStations {
       log.warn({ rigId: rig.id }, motion === undefined ? 'the rig has no motion data and is not driven' : 'another server drives the rig');
       return;
     }
-    const apparatus = rig.link.kind === 'simulated' ? this.parts.apparatusOf(rig) : null;
+    const apparatus = insideServer(rig.link) ? this.parts.apparatusOf(rig) : null;
     const factory = apparatus?.factory ?? this.factoryOf(rig.link);
     const link = createLink({ factory, clock, rig: motion, epoch });
     const channel = apparatus === null ? null : await this.simulatedChannel(rig);
@@ -92,6 +92,8 @@ export class ServerRigStations implements RigStations {
       return { ok: false, detail: 'The rig document has no motion data (steps per degree, limits); enter them first.', firmware: null };
     if (settings.kind === 'simulated')
       return { ok: true, detail: 'The simulated turntable is part of this server and always answers.', firmware: 'simulated' };
+    if (settings.kind === 'board')
+      return { ok: true, detail: 'The emulated controller board is part of this server and always answers.', firmware: null };
     const own = this.openOn(settings);
     if (own !== null) return ownAnswer(own);
     return tryLink({ factory: this.factoryOf(settings), clock: this.parts.clock });
@@ -166,6 +168,9 @@ export class ServerRigStations implements RigStations {
     );
   }
 }
+
+/** The turntable and the pendulum of such a rig are part of this server. */
+const insideServer = ({ kind }: LinkSettings) => kind === 'simulated' || kind === 'board';
 
 function ownAnswer(station: RigStation): { ok: boolean; detail: string; firmware: string | null } {
   const { condition, detail } = station.link.health();

@@ -3,8 +3,8 @@ import { Worker } from 'node:worker_threads';
 import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { WorkerAnswer, WorkerCall } from './worker-thread';
 
-/** Node 20 carries no loader hooks into a thread, so the thread itself brings TypeScript in before it loads its file. */
-const loadThread = `require('tsx/cjs'); require(${JSON.stringify(join(__dirname, 'worker-thread.ts'))});`;
+/** Node 20 carries no loader hooks into a thread, so the thread itself brings TypeScript in before it loads a file of this folder. */
+export const threadOf = (file: string) => `require('tsx/cjs'); require(${JSON.stringify(join(__dirname, file))});`;
 
 interface Pending {
   resolve(value: unknown): void;
@@ -34,7 +34,7 @@ class Lane {
   }
 
   private begin(): Worker {
-    const worker = new Worker(loadThread, { eval: true, execArgv: [] });
+    const worker = new Worker(threadOf('worker-thread.ts'), { eval: true, execArgv: [] });
     worker.unref();
     worker.on('message', (answer: WorkerAnswer) => this.answered(answer));
     worker.on('error', (error: Error) => this.broken(worker, error));

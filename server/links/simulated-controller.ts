@@ -58,6 +58,7 @@ export interface SimulatedController {
 const DEFAULT_RATE_PPM = 18;
 const DEFAULT_UPTIME_S = 4321.5;
 const US_PER_MS = 1000;
+const BITS_PER_BYTE = 10;
 
 function settingOf({ rig, seed = 1, ...options }: SimulatedControllerOptions): MachineSetting {
   return {
@@ -88,7 +89,8 @@ export function createSimulatedController(options: SimulatedControllerOptions): 
   const line = new SimulatedLine({
     clock,
     seed,
-    baudRate: options.baudRate ?? 115_200,
+    byteMs: (BITS_PER_BYTE * 1000) / (options.baudRate ?? 115_200),
+    spendsByteTimes: true,
     description: 'the simulated turntable',
     toController: (text) => act((us) => machine.receive(text, us)),
   });

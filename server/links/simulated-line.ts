@@ -6,19 +6,21 @@ import type { Clock } from '../interfaces/clock';
 export interface SimulatedLineSetting {
   clock: Clock;
   seed: number;
-  baudRate: number;
+  /** What a host is told about the time of a byte, ms. */
+  byteMs: number;
+  /** Whether bytes take that time here; else whatever is behind the line spends it. */
+  spendsByteTimes: boolean;
   description: string;
   /** A line has arrived at the controller. */
   toController: (line: string) => void;
 }
 
-const BITS_PER_BYTE = 10;
 const LEAST_NOISE_GAP_MS = 20;
 const GREATEST_NOISE_GAP_MS = 120;
 const GREATEST_NOISE_BYTES = 60;
 
 /**
- * The line between the driver and the simulated controller, in memory on the injected clock: every byte takes its
+ * The line between the driver and a controller in memory, on the injected clock: every byte takes its
  * time on the wire, in each direction for itself; the line can be dead, noisy or slow for a while.
  */
 export class SimulatedLine {
@@ -35,9 +37,10 @@ export class SimulatedLine {
   private missing = false;
 
   constructor(private readonly setting: SimulatedLineSetting) {
-    this.byteMs = (BITS_PER_BYTE * 1000) / setting.baudRate;
-    this.random = xoroshiro128plus(setting.seed);
-    this.factory = { description: setting.description, byteTimeMs: this.byteMs, open: (handlers) => this.open(handlers) };
+    const { byteMs, spendsByteTimes, description, seed } = setting;
+    this.byteMs = spendsByteTimes ? byteMs : 0;
+    this.random = xoroshiro128plus(seed);
+    this.factory = { description, byteTimeMs: byteMs, open: (handlers) => this.open(handlers) };
   }
 
   /** A line of the controller whose first byte goes out at `atMs` of the clock's monotonic time, or as soon as the wire is free. */
@@ -92,18 +95,22 @@ export class SimulatedLine {
   }
 
   private write(bytes: string): void {
-    const { clock, toController } = this.setting;
+    const { clock } = this.setting;
     let from = 0;
     for (let end = bytes.indexOf('\n'); end >= 0; end = bytes.indexOf('\n', from)) {
       const line = this.rest + bytes.slice(from, end);
       this.outBusyMs = Math.max(this.outBusyMs, clock.monotonicMs()) + (end + 1 - from) * this.byteMs;
       this.rest = '';
       from = end + 1;
-      clock.after(Math.max(this.outBusyMs, this.frozenUntilMs) - clock.monotonicMs(), () => {
-        if (!this.dead()) toController(this.through(line));
-      });
+      const delayMs = Math.max(this.outBusyMs, this.frozenUntilMs) - clock.monotonicMs();
+      if (delayMs > 0) clock.after(delayMs, () => this.arrive(line));
+      else this.arrive(line);
     }
     this.rest += bytes.slice(from);
+  }
+
+  private arrive(line: string): void {
+    if (!this.dead()) this.setting.toController(this.through(line));
   }
 
   private dead(): boolean {

@@ -5,6 +5,8 @@ import { defineRoute } from './route';
 
 export const linkSettingsSchema = z.discriminatedUnion('kind', [
   z.strictObject({ kind: z.literal('simulated') }),
+  /** The controller's own firmware on a board that the server emulates. */
+  z.strictObject({ kind: z.literal('board') }),
   z.strictObject({
     kind: z.literal('serial'),
     path: z.string().min(1).max(300),

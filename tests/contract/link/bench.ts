@@ -29,8 +29,8 @@ export interface BenchMaker {
   firmware: string;
   /** A controller whose position is known and whose warning is over. */
   make(): Promise<LinkBench>;
-  /** The same line with something else at its end. */
-  makeStranger(kind: 'babble' | 'other-major'): Promise<LinkBench>;
+  /** The same line with something else at its end; null where the line is one with its controller. */
+  makeStranger: ((kind: 'babble' | 'other-major') => Promise<LinkBench>) | null;
   /** How far the logged beginning of a timed move may lie from the one asked for, s. */
   beginToleranceS: number;
   /** Length of the noise in a motion: with the pauses of a busy machine shorter than the lease, ms. */

@@ -1,4 +1,3 @@
-import { tryLink } from '@/server/links/try-link';
 import type { BenchMaker } from './bench';
 import { LinkWatch } from './link-watch';
 import type { Scene } from './scene';
@@ -82,26 +81,5 @@ export function troubleConformance(maker: BenchMaker, scene: Scene): void {
     const back = await scene.watch.get('ready', { nth: 1 });
     expect(back).toMatchObject({ sameBoot: false, controller: { positionKnown: false, angleDeg: null, driversOn: false } });
     expect((await scene.watch.get('refused', { of: scene.watch.move(0) })).code).toBe('unknown');
-  });
-
-  test('another device that talks on the port is refused in words, and nothing of it is obeyed', async () => {
-    await scene.begin(maker.makeStranger('babble'));
-    scene.watch.link.open();
-    const { why } = await scene.watch.get('refused-controller', { withinMs: 15_000 });
-    expect(why).toMatch(/^Something talks at .*, but not the controller's language: \d+ lines were dropped\./);
-    expect(scene.watch.link.health().condition).toBe('refused');
-    expect((await scene.watch.get('refused', { of: scene.watch.move(1) })).code).toBe('no-session');
-    await scene.watch.link.close();
-    const trial = await scene.settled(tryLink({ factory: scene.bench.factory, clock: scene.bench.clock }));
-    expect(trial).toMatchObject({ ok: false, firmware: null });
-    expect(trial.detail).toContain('not the controller');
-  });
-
-  test('a controller of another major version is refused with both numbers', async () => {
-    await scene.begin(maker.makeStranger('other-major'));
-    scene.watch.link.open();
-    const { why } = await scene.watch.get('refused-controller', { withinMs: 15_000 });
-    expect(why).toMatch(/speaks version 2\.0 of the line protocol, this server version 1\.0/);
-    expect(scene.watch.link.health().condition).toBe('refused');
   });
 }
