@@ -1,7 +1,9 @@
 import { useLocalSearchParams, useRouter, type Href } from 'expo-router';
 import { useState } from 'react';
 import { fieldErrors, useLabMutation, useMay, wordsOf } from '@/components/api';
-import { Body, Button, Icon, Loading, Panel, ProblemNotice, Screen, useToast } from '@/components/ui';
+import { HealthPanel, InputsPanel } from '@/components/link/line-panels';
+import { useLiveLine } from '@/components/link/use-live-line';
+import { Body, Button, Icon, Loading, Panel, ProblemNotice, Screen, Section, useToast } from '@/components/ui';
 import { changeLink, tryLink, type LinkSettings, type RigView } from '@/shared/contracts/rigs';
 import { LinkForm } from './link-form';
 import { linkName } from './link-words';
@@ -24,10 +26,47 @@ export function LinkScreen() {
       </Screen>
     );
   }
+  return <LinkPage rig={rig} etag={query.data?.etag ?? undefined} />;
+}
+
+/** The line as it is now for everybody; the choice of another and the first move for those who may. */
+function LinkPage({ rig, etag }: { rig: RigView; etag: string | undefined }) {
+  const { line } = useLiveLine(rig.id);
   return (
-    <Screen title={`Link of ${rig.name}`} back={back} testID="link-screen">
-      <LinkChoice rig={rig} etag={query.data?.etag ?? undefined} />
+    <Screen
+      title={`Link of ${rig.name}`}
+      back={{ href: `/rigs/${rig.id}` as Href, label: rig.name }}
+      testID="link-screen"
+      aside={
+        <>
+          <HealthPanel line={line} />
+          <InputsPanel line={line} />
+        </>
+      }
+    >
+      <FirstMoveEntry rig={rig} />
+      <Section title="Line to the controller">
+        <LinkChoice rig={rig} etag={etag} />
+      </Section>
     </Screen>
+  );
+}
+
+function FirstMoveEntry({ rig }: { rig: RigView }) {
+  const router = useRouter();
+  return (
+    <Panel className="gap-3" edge="lamp">
+      <Body>
+        A new drive, motor, belt or board: find out at the rig which way the table turns, how many microsteps make a degree and how far it
+        may go, and teach the controller its limits.
+      </Body>
+      <Button
+        label="First move"
+        className="self-start"
+        onPress={() => router.push(`/rigs/${rig.id}/first-move` as Href)}
+        testID="first-move"
+      />
+    </Panel>
   );
 }
 

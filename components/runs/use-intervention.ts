@@ -15,21 +15,21 @@ const inconclusive: ReadonlySet<string> = new Set(['still-running', 'database-aw
 
 type Outcome = { kind: 'accepted'; serverAtMs: number } | { kind: 'refused'; detail: string };
 
-interface Request extends RunAddress {
+interface Tap {
   act: SafeAct;
   key: string;
   tappedAt: string;
 }
 
-async function sendOnce({ labId, runId, act, key, tappedAt }: Request, signal: AbortSignal): Promise<Attempt<Outcome>> {
+/** Sends one attempt at a safe act to the server. */
+export type SafePost = (
+  act: SafeAct,
+  input: { body: { tappedAt: string }; idempotencyKey: string; keepalive: true; signal: AbortSignal },
+) => Promise<{ data: { serverAt: string } }>;
+
+async function sendOnce(post: SafePost, { act, key, tappedAt }: Tap, signal: AbortSignal): Promise<Attempt<Outcome>> {
   try {
-    const { data } = await call(routes[act], {
-      params: { labId, runId },
-      body: { tappedAt },
-      idempotencyKey: key,
-      keepalive: true,
-      signal,
-    });
+    const { data } = await post(act, { body: { tappedAt }, idempotencyKey: key, keepalive: true, signal });
     return { kind: 'answer', value: { kind: 'accepted', serverAtMs: Date.parse(data.serverAt) } };
   } catch (error) {
     if (error instanceof ApiProblem && !inconclusive.has(error.code))
@@ -38,11 +38,16 @@ async function sendOnce({ labId, runId, act, key, tappedAt }: Request, signal: A
   }
 }
 
+export interface SafeActs {
+  local: LocalIntervention;
+  tap: (act: SafeAct) => void;
+}
+
 /**
  * Hold, hold after this dwell and stop: one tap, sent until answered, acted on at most once. Leaving the screen does not
  * take it back: what was tapped goes on being sent.
  */
-export function useIntervention({ labId, runId }: RunAddress): { local: LocalIntervention; tap: (act: SafeAct) => void } {
+export function useSafeActs(post: SafePost): SafeActs {
   const [local, dispatch] = useReducer(interventionReducer, { kind: 'idle' });
   const running = useRef<{ act: SafeAct; sending: Sending<Outcome> } | null>(null);
   const tap = (act: SafeAct) => {
@@ -52,11 +57,10 @@ export function useIntervention({ labId, runId }: RunAddress): { local: LocalInt
     }
     if (running.current?.act === 'stop') return;
     running.current?.sending.cancel();
-    const key = newIdempotencyKey();
-    const request = { labId, runId, act, key, tappedAt: serverNowIso() };
+    const request = { act, key: newIdempotencyKey(), tappedAt: serverNowIso() };
     dispatch({ kind: 'tapped', act, atMs: serverNowMs() });
     const sending = sendUntilAnswered<Outcome>({
-      send: (signal) => sendOnce(request, signal),
+      send: (signal) => sendOnce(post, request, signal),
       onAttempt: () => dispatch({ kind: 'attempt' }),
       onNoAnswer: () => dispatch({ kind: 'no-answer' }),
     });
@@ -69,6 +73,10 @@ export function useIntervention({ labId, runId }: RunAddress): { local: LocalInt
   };
   return { local, tap };
 }
+
+/** The safe acts of a run. */
+export const useIntervention = ({ labId, runId }: RunAddress): SafeActs =>
+  useSafeActs((act, input) => call(routes[act], { params: { labId, runId }, ...input }));
 
 /** A resume counts for 5 s after the tap: whoever tapped must still be looking. */
 const resumeExpiresMs = 5000;

@@ -29,6 +29,7 @@ const screen = (name: keyof Screens): ComponentType =>
 export const DataScreen = screen('DataScreen');
 export const EditorScreen = screen('EditorScreen');
 export const EvaluationScreen = screen('EvaluationScreen');
+export const FirstMoveScreen = screen('FirstMoveScreen');
 export const ImportScreen = screen('ImportScreen');
 export const LabScreen = screen('LabScreen');
 export const LinkScreen = screen('LinkScreen');

@@ -1,6 +1,7 @@
 export { DataScreen } from '@/components/data/data-screen';
 export { ImportScreen } from '@/components/data/import-screen';
 export { EvaluationScreen } from '@/components/evaluation/evaluation-screen';
+export { FirstMoveScreen } from '@/components/link/first-move-screen';
 export { LabScreen } from '@/components/lab/lab-screen';
 export { EditorScreen } from '@/components/protocols/editor-screen';
 export { NewProtocolScreen } from '@/components/protocols/new-protocol-screen';

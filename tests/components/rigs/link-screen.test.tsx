@@ -4,6 +4,7 @@ import { LinkScreen } from '@/components/rigs/link-screen';
 import type { Role } from '@/shared/contracts/roles';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { params, went } from '../support/fake-router';
+import { startFakeStream } from '../support/fake-stream';
 import { problem, settled, showInLab, startFakeLab, type FakeLab } from '../support/fake-lab';
 
 jest.mock('expo-router', () => jest.requireActual('../support/fake-router'));
@@ -36,6 +37,8 @@ const rig = {
 function Page() {
   return useSession().membership === null ? null : <LinkScreen />;
 }
+
+beforeEach(() => startFakeStream());
 
 async function open(role: Role): Promise<FakeLab> {
   const lab = startFakeLab(role);

@@ -1,0 +1,5 @@
+import { FirstMoveScreen } from '@/components/shell/lazy-screens';
+
+export default function FirstMove() {
+  return <FirstMoveScreen />;
+}

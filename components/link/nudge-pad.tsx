@@ -1,0 +1,127 @@
+import { View } from 'react-native';
+import { readDecimal } from '@/components/ui/read-decimal';
+import { Body, Button, Check, Field, Label, Panel, ProblemNotice } from '@/components/ui';
+import type { GuidedView, LineMessage } from '@/shared/contracts/link';
+import { formatDegrees } from '@/shared/lib/format-angle';
+import { pathObstacles } from '@/shared/protocol/motion-path';
+import type { RigMotion } from '@/shared/rig/document';
+import type { FirstMove } from './first-move-draft';
+import type { GuidedMove } from './use-guided';
+
+interface NudgePadProps {
+  motion: RigMotion;
+  line: LineMessage;
+  guided: GuidedMove;
+  move: FirstMove;
+}
+
+const orderWords: Record<NonNullable<GuidedView['order']>['state'], string> = {
+  sent: 'sent to the controller',
+  accepted: 'accepted; it begins at once, or 10 s after the warning',
+  moving: 'the table turns',
+  done: 'done, the table stands still',
+  'cut short': 'cut short.',
+  refused: 'refused by the controller:',
+};
+
+/** The state of the newest order in words. */
+function OrderState({ order }: { order: GuidedView['order'] }) {
+  if (order === null) return null;
+  const what = order.kind === 'home' ? 'Home' : `Nudge of ${String(order.steps)} microsteps`;
+  const bad = order.state === 'cut short' || order.state === 'refused';
+  return (
+    <Body role="status" tone={bad ? 'danger' : 'text'} testID="order-state">
+      {what}: {orderWords[order.state]} {order.detail}
+    </Body>
+  );
+}
+
+/** Turns the table a little, one tap a nudge, both ways. */
+export function NudgePad({ motion, line, guided, move }: NudgePadProps) {
+  const { draft, set } = move;
+  const { mine, whyNot, busy } = guided;
+  const longest = mine?.longestNudgeSteps ?? 0;
+  const steps = readDecimal(draft.nudgeSteps);
+  const usable = steps !== null && Number.isInteger(steps) && steps >= 1 && steps <= longest;
+  const angleDeg = line.controller?.angleDeg ?? null;
+  const meets = (signed: number) =>
+    usable &&
+    angleDeg !== null &&
+    pathObstacles(motion, angleDeg, angleDeg + signed / motion.stepsPerDegree).some(({ code }) => code === 'keep-out');
+  const near = meets(steps ?? 0) || meets(-(steps ?? 0));
+  const off = !usable || whyNot !== '' || mine === null;
+  return (
+    <Panel className="gap-3" testID="nudge-pad">
+      <Field
+        label="Microsteps of a nudge"
+        value={draft.nudgeSteps}
+        onChange={(nudgeSteps) => set({ nudgeSteps })}
+        type="number"
+        hint={usable ? `${formatDegrees(steps / motion.stepsPerDegree)} by the rig document; at most ${longest}` : undefined}
+        error={usable ? undefined : `a whole number from 1 to ${longest}`}
+        testID="nudge-steps"
+      />
+      {near ? (
+        <Check
+          label="I look at the gap: this nudge may enter an arc that is kept out of runs."
+          value={draft.intoKeepOut}
+          onChange={(intoKeepOut) => set({ intoKeepOut })}
+          testID="into-keep-out"
+        />
+      ) : null}
+      <View className="flex-row gap-3">
+        <Button
+          className="min-w-0 flex-1"
+          size="action"
+          label="↺ Nudge"
+          accessibilityLabel="Nudge counter-clockwise"
+          disabled={off}
+          busy={busy}
+          onPress={() => guided.nudge(steps ?? 0, near && draft.intoKeepOut)}
+          testID="nudge-ccw"
+        />
+        <Button
+          className="min-w-0 flex-1"
+          size="action"
+          label="Nudge ↻"
+          accessibilityLabel="Nudge clockwise"
+          disabled={off}
+          busy={busy}
+          onPress={() => guided.nudge(-(steps ?? 0), near && draft.intoKeepOut)}
+          testID="nudge-cw"
+        />
+      </View>
+      <Label>Seen from above: ↺ counter-clockwise, the angle grows; ↻ clockwise.</Label>
+      <OrderState order={mine?.order ?? null} />
+      {whyNot === '' ? null : (
+        <Label tone="text" testID="why-not">
+          {whyNot}
+        </Label>
+      )}
+      {guided.problem === null ? null : <ProblemNotice title="Nothing was moved" {...guided.problem} />}
+    </Panel>
+  );
+}
+
+/** Finds the home edge, so that angles are known. */
+export function HomeButton({ line, guided }: Pick<NudgePadProps, 'line' | 'guided'>) {
+  const known = line.controller?.positionKnown === true;
+  return (
+    <View className="gap-2">
+      <Label tone="text">
+        {known
+          ? `The position is known: ${formatDegrees(line.controller?.angleDeg ?? null)} by the rig document.`
+          : 'The position is not known. Nudge the table until it stands near the edge of the home flag, then home: it searches at home speed, towards the edge.'}
+      </Label>
+      <Button
+        icon="home"
+        label={known ? 'Home again' : 'Home'}
+        className="self-start"
+        disabled={guided.whyNot !== '' || guided.mine === null}
+        busy={guided.busy}
+        onPress={guided.home}
+        testID="home"
+      />
+    </View>
+  );
+}
