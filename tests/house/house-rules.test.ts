@@ -43,6 +43,12 @@ test('file names are kebab-case', () => {
   ).toEqual([]);
 });
 
+test('the firmware keeps the same measure: at most 300 lines, kebab-case, no C++ standard library', () => {
+  const firmware = trackedFiles().filter((path) => /\.(cpp|hpp)$/.test(path));
+  expect(firmware.filter((path) => lines(path) > 300 || !/\/[a-z0-9]+(-[a-z0-9]+)*\.[ch]pp$/.test(path))).toEqual([]);
+  expect(firmware.filter((path) => /#include <(?!avr\/|util\/)[^>.]+>/.test(text(path)))).toEqual([]);
+});
+
 test('nothing imports the tests', () => {
   expect(productFiles().filter((path) => /from '(@\/|(\.\.\/)+)tests\//.test(text(path)))).toEqual([]);
 });

@@ -280,6 +280,7 @@ void start(hal::BootCause cause) {
 bool turn() {
   const Tick now = hal::ticks();
   clock::advance(now);
+  motion::noticeBeginning(now);
   inputs::tell();
   bool more = receive();
   countLost();

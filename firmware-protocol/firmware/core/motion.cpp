@@ -49,6 +49,8 @@ void cancel(Cause cause) {
 }
 
 void pollWaiting(Tick now) {
+  noticeBeginning(now);
+  if (active.state != State::waiting) return;
   if (active.order != Order::move) {
     if (!reached(active.begin, now)) return hal::wakeAt(active.begin);
     const Cause cause = hindrance(inputs::levels(), now);
@@ -60,7 +62,7 @@ void pollWaiting(Tick now) {
     hal::Lock lock;
     launch = active.launch;
   }
-  if (launch == Launch::begun) return reached(active.begin, now) ? begun(active.begin) : hal::wakeAt(active.begin);
+  if (launch == Launch::begun) return hal::wakeAt(active.begin);
   if (launch == Launch::refused) finish(active.cause, hal::ticks());
 }
 
@@ -149,6 +151,15 @@ void test() {
   }
   active.launch = Launch::begun;
   stepper::goAt(active.begin);
+}
+
+void noticeBeginning(Tick now) {
+  Launch launch;
+  {
+    hal::Lock lock;
+    launch = active.launch;
+  }
+  if (active.state == State::waiting && launch == Launch::begun && reached(active.begin, now)) begun(active.begin);
 }
 
 void begun(Tick at) {

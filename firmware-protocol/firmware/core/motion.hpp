@@ -44,6 +44,8 @@ void newSession();
 void passEdge(Tick at, int32_t place, bool uncovered);
 void fail(Fault fault);
 
+/** Tells that a timed motion has begun; before the inputs tell what its first step did to them. */
+void noticeBeginning(Tick now);
 /** Lets everything happen that is due. */
 void poll(Tick now);
 /** In the interrupt that `hal::armTest` ordered: the tests of SPEC 8.2, just before the first step. */

@@ -5,7 +5,7 @@ import invalid from '@/firmware-protocol/vectors/invalid.json';
 import streams from '@/firmware-protocol/vectors/streams.json';
 import valid from '@/firmware-protocol/vectors/valid.json';
 import { FRESH, readByFirmware } from '@/tests/support/firmware-host';
-import { sealed } from '@/tests/support/firmware-script';
+import { FirmwareScript, sealed } from '@/tests/support/firmware-script';
 
 /** As the host program tells what a line says. A controller drops whatever is no request. */
 function told(item: Item): string[] {
@@ -74,4 +74,22 @@ test(`${LINES} seeded lines between right and wrong are read as the codec reads 
   expect(differing).toEqual([]);
   const kinds = new Set(lines.map((line) => decodeLine(line).kind));
   expect([...kinds].sort()).toEqual(['garbage', 'request', 'unusable']);
+});
+
+test('no line with a flipped bit moves anything, though the lease is live and the rig is homed', () => {
+  const script = new FirmwareScript({ place: -20 }).wait(100).hello().order('renew').order('home 0000AAAA').renewing(20_000).order('renew');
+  const good = sealed('q 7 00010001 30000 move 0000AAAB 500 100000 100000 now');
+  const bits = [...good].flatMap((_, at) => [0, 1, 2, 3, 4, 5, 6, 7].map((bit) => [at, bit] as const));
+  for (const [at, bit] of bits) {
+    const flipped = good.slice(0, at) + String.fromCharCode(good.charCodeAt(at) ^ (1 << bit)) + good.slice(at + 1);
+    script.raw(`${flipped}\n`).wait(1);
+  }
+  const beforeUs = 19_900_000;
+  const run = script.order('status').raw(good).wait(500).run();
+  expect(run.replies.at(-2)?.body).toMatchObject({ word: 'ok', state: 'rest', position: 0 });
+  const dropped = run.replies.at(-2)?.body;
+  // A flipped line feed joins its line to the next; a byte that becomes one cuts its own in two.
+  expect(dropped?.word === 'ok' && dropped.dropped).toBeGreaterThanOrEqual(bits.length - 8);
+  expect(run.stepsAfter(beforeUs).steps.length).toBeGreaterThan(0);
+  expect(run.stepsAfter(beforeUs).steps[0]?.atUs).toBeGreaterThan((script.now - 520) * 1000);
 });
