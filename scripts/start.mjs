@@ -2,7 +2,7 @@
 /** `npm start`: everything from a bare clone to a running demo lab, and a clean end on Ctrl-C. */
 import { spawn } from 'node:child_process';
 import { existsSync, mkdirSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
-import { join } from 'node:path';
+import { join, relative } from 'node:path';
 import { createInterface } from 'node:readline';
 import { startCluster } from './lib/cluster.mjs';
 import { ensureDebianPackages } from './lib/debian.mjs';
@@ -65,7 +65,7 @@ function welcome({ listening: address, signIns = [], mailbox }) {
     say(`Demo sign-ins (password ${signIns[0].password}):`);
     for (const { email, role } of signIns) say(`  ${email.padEnd(32)} ${role}`);
   }
-  if (mailbox) say(`Mail that the demo lab sends is kept in ${mailbox}`);
+  if (mailbox) say(`Mail that the demo lab sends is kept in ${relative(process.cwd(), mailbox)}`);
   say('\nCtrl-C ends it; the data stay.');
 }
 

@@ -12,7 +12,7 @@ export function RoleMatrix() {
     <Panel className="px-3">
       <table className="w-full border-collapse font-sans text-13 text-text">
         <caption className="pb-2 text-left text-dim">
-          You are {own}: {roleSummary[own]}.
+          Your role is {own}: {roleSummary[own]}.
         </caption>
         <thead>
           <tr>

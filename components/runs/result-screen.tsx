@@ -61,7 +61,7 @@ export function ResultScreen({ view }: { view: RunView }) {
       </View>
       <Label>
         {view.protocolName}
-        {view.protocolRevision > 0 ? `, revision ${view.protocolRevision}` : ''}, on {view.rigName} with {view.massSetLabel}, by{' '}
+        {view.protocolRevision > 0 ? `, revision ${view.protocolRevision}` : ''}, on {view.rigName}; mass set: {view.massSetLabel}; by{' '}
         {view.operator}.
       </Label>
       {view.notes === '' ? null : <Body>{view.notes}</Body>}
