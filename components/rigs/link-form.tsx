@@ -2,6 +2,7 @@ import { useState } from 'react';
 import { View } from 'react-native';
 import { Field, Label, Tabs } from '@/components/ui';
 import type { LinkSettings } from '@/shared/contracts/rigs';
+import { NetworkFields, type NetworkLink } from './network-fields';
 
 interface LinkFormProps {
   link: LinkSettings;
@@ -18,16 +19,27 @@ const insideServer = {
     'A light stand-in for a controller inside the server, with the same line protocol and limits, and a pendulum that answers to it. For learning, rehearsing and tests.',
 };
 
-/** A controller inside the server, or a serial line by its path and speed. What was typed for the line survives a look at the other choice. */
+/** A controller inside the server, a serial line by its path and speed, or a network serial server. What was typed for the line survives a look at the other choice. */
 export function LinkForm({ link, onChange, errors }: LinkFormProps) {
   const [path, setPath] = useState(link.kind === 'serial' ? link.path : '');
   const [baud, setBaud] = useState(String(link.kind === 'serial' ? link.baudRate : usualBaud));
+  const [network, setNetwork] = useState<NetworkLink>(
+    link.kind === 'tcp' ? link : { kind: 'tcp', host: '', port: 0, mode: 'raw', baudRate: usualBaud },
+  );
   const baudRate = Number(baud);
   const serial = (change: { path?: string; baud?: string }) => {
     const next = { path, baud, ...change };
     setPath(next.path);
     setBaud(next.baud);
     onChange({ kind: 'serial', path: next.path.trim(), baudRate: Number(next.baud) || usualBaud });
+  };
+  const overNetwork = (next: NetworkLink) => {
+    setNetwork(next);
+    onChange(next);
+  };
+  const choose = (kind: LinkSettings['kind']) => {
+    if (kind === 'serial') return serial({});
+    return kind === 'tcp' ? overNetwork(network) : onChange({ kind });
   };
   return (
     <View className="gap-4">
@@ -38,20 +50,21 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
           { value: 'board', label: 'Emulated board' },
           { value: 'simulated', label: 'Simulated' },
           { value: 'serial', label: 'Serial line' },
+          { value: 'tcp', label: 'Network' },
         ]}
-        onChange={(kind) => (kind === 'serial' ? serial({}) : onChange({ kind }))}
+        onChange={choose}
       />
-      {link.kind !== 'serial' ? (
-        <Label>{insideServer[link.kind]}</Label>
-      ) : (
+      {(link.kind === 'board' || link.kind === 'simulated') && <Label>{insideServer[link.kind]}</Label>}
+      {link.kind === 'tcp' && <NetworkFields link={network} onChange={overNetwork} errors={errors} />}
+      {link.kind === 'serial' && (
         <>
           <Field
             label="Path of the line"
             value={path}
             onChange={(next) => serial({ path: next })}
             mono
-            placeholder="/dev/pts/4"
-            hint="As the server sees it. In this version a pseudo-terminal; real ports come with the controller's own acceptance."
+            placeholder="/dev/serial/by-id/…"
+            hint="As the server sees it. A name under /dev/serial/by-id stays the same whatever is plugged in; one like /dev/ttyUSB0 does not."
             error={errors['path']}
             testID="link-path"
           />

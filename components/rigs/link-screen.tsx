@@ -84,7 +84,7 @@ function LinkChoice({ rig, etag }: { rig: RigView; etag: string | undefined }) {
   });
   const problem = attempt.error ?? save.error;
   const params = { rigId: rig.id };
-  const incomplete = link.kind === 'serial' && link.path.trim() === '';
+  const incomplete = link.kind === 'serial' ? link.path.trim() === '' : link.kind === 'tcp' && (link.host === '' || link.port === 0);
   if (!mayEdit.ok) return <Body tone="dim">{mayEdit.why}</Body>;
   return (
     <>

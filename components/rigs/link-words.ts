@@ -30,5 +30,6 @@ export function linkState(live: RigLive): LinkState {
 
 export function linkName(link: LinkSettings): string {
   if (link.kind === 'simulated') return 'Simulated controller';
-  return link.kind === 'board' ? 'Emulated controller board' : `${link.path}, ${link.baudRate} baud`;
+  if (link.kind === 'board') return 'Emulated controller board';
+  return link.kind === 'serial' ? `${link.path}, ${link.baudRate} baud` : `${link.host}, port ${link.port}`;
 }

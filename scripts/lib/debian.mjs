@@ -45,6 +45,7 @@ const present = {
   'g++': () => onPath('g++'),
   'gcc-avr': () => onPath('avr-g++'),
   'avr-libc': () => existsSync('/usr/lib/avr/include/avr/io.h'),
+  ser2net: () => onPath('ser2net'),
 };
 
 /** Makes sure that Debian's packages are there: installs them when root, else says the exact command and ends. */

@@ -1,14 +1,16 @@
 import type { Logger } from 'pino';
 import type { LinkSettings } from '@/shared/contracts/rigs';
 import type { RigDocument } from '@/shared/rig/document';
-import { NotYetError } from '@/shared/lib/not-yet-error';
 import type { ByteLineFactory } from '../interfaces/byte-line';
 import type { Cancel, Clock } from '../interfaces/clock';
+import type { ListedPort } from '../interfaces/serial-ports';
 import type { LiveSampleBatch, RigStation, RigStations, StationRig } from '../interfaces/rig-stations';
 import type { SampleStore } from '../interfaces/sample-store';
 import type { LinkEvent } from '../interfaces/turntable-link';
 import { createLink } from '../links/link-driver';
-import { assertPseudoTerminal, serialFactory } from '../links/serial-line';
+import { listPorts } from '../links/port-list';
+import { serialFactory } from '../links/serial-line';
+import { tcpFactory } from '../links/tcp-line';
 import { tryLink } from '../links/try-link';
 import { findOrMakeChannel } from '../store/imports';
 import type { Connection } from '../store/database';
@@ -57,8 +59,9 @@ export class ServerRigStations implements RigStations {
       log.warn({ rigId: rig.id }, motion === undefined ? 'the rig has no motion data and is not driven' : 'another server drives the rig');
       return;
     }
-    const apparatus = insideServer(rig.link) ? this.parts.apparatusOf(rig) : null;
-    const factory = apparatus?.factory ?? this.factoryOf(rig.link);
+    const outside = factoryOf(rig.link, clock);
+    const apparatus = outside === null ? this.parts.apparatusOf(rig) : null;
+    const factory = outside ?? (apparatus as SimulatedApparatus).factory;
     const link = createLink({ factory, clock, rig: motion, epoch });
     const channel = apparatus === null ? null : await this.simulatedChannel(rig);
     const station: OpenStation = { labId: rig.labId, rigId: rig.id, settings: rig.link, link, channel, end: () => undefined };
@@ -79,8 +82,8 @@ export class ServerRigStations implements RigStations {
     this.apparatus.get(rigId)?.load(document);
   }
 
-  async assertAllowed(settings: LinkSettings): Promise<void> {
-    if (settings.kind === 'serial') await assertPseudoTerminal(settings.path);
+  listPorts(): Promise<ListedPort[]> {
+    return listPorts();
   }
 
   async tryLine(
@@ -90,13 +93,14 @@ export class ServerRigStations implements RigStations {
     const { motion } = rig.document;
     if (motion === undefined)
       return { ok: false, detail: 'The rig document has no motion data (steps per degree, limits); enter them first.', firmware: null };
-    if (settings.kind === 'simulated')
-      return { ok: true, detail: 'The simulated turntable is part of this server and always answers.', firmware: 'simulated' };
+    const factory = factoryOf(settings, this.parts.clock);
     if (settings.kind === 'board')
       return { ok: true, detail: 'The emulated controller board is part of this server and always answers.', firmware: null };
+    if (factory === null)
+      return { ok: true, detail: 'The simulated turntable is part of this server and always answers.', firmware: 'simulated' };
     const own = this.openOn(settings);
     if (own !== null) return ownAnswer(own);
-    return tryLink({ factory: this.factoryOf(settings), clock: this.parts.clock });
+    return tryLink({ factory, clock: this.parts.clock });
   }
 
   onSamples(listener: (batch: LiveSampleBatch) => void): () => void {
@@ -122,16 +126,8 @@ export class ServerRigStations implements RigStations {
     this.sinks.delete(rigId);
   }
 
-  private factoryOf(settings: LinkSettings): ByteLineFactory {
-    if (settings.kind !== 'serial') throw new NotYetError('This kind of line cannot be opened yet.');
-    return serialFactory(settings, this.parts.clock);
-  }
-
   private openOn(settings: LinkSettings): RigStation | null {
-    if (settings.kind !== 'serial') return null;
-    return (
-      [...this.stations.values()].find((station) => station.settings.kind === 'serial' && station.settings.path === settings.path) ?? null
-    );
+    return [...this.stations.values()].find((station) => isSameLine(station.settings, settings)) ?? null;
   }
 
   private async simulatedChannel(rig: StationRig): Promise<RigStation['channel']> {
@@ -169,8 +165,23 @@ export class ServerRigStations implements RigStations {
   }
 }
 
-/** The turntable and the pendulum of such a rig are part of this server. */
-const insideServer = ({ kind }: LinkSettings) => kind === 'simulated' || kind === 'board';
+/** Null where the turntable is part of this server: that is no line that could be opened. */
+function factoryOf(settings: LinkSettings, clock: Clock): ByteLineFactory | null {
+  switch (settings.kind) {
+    case 'serial':
+      return serialFactory(settings, clock);
+    case 'tcp':
+      return tcpFactory(settings, clock);
+    case 'simulated':
+    case 'board':
+      return null;
+  }
+}
+
+function isSameLine(a: LinkSettings, b: LinkSettings): boolean {
+  if (a.kind === 'serial') return b.kind === 'serial' && a.path === b.path;
+  return a.kind === 'tcp' && b.kind === 'tcp' && a.host === b.host && a.port === b.port;
+}
 
 function ownAnswer(station: RigStation): { ok: boolean; detail: string; firmware: string | null } {
   const { condition, detail } = station.link.health();

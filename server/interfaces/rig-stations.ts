@@ -1,5 +1,6 @@
 import type { LinkSettings } from '@/shared/contracts/rigs';
 import type { RigDocument } from '@/shared/rig/document';
+import type { ListedPort } from './serial-ports';
 import type { TurntableLink } from './turntable-link';
 
 /** What a rig is to this process: its open line, and for the simulated rig the pendulum behind it. */
@@ -35,8 +36,8 @@ export interface RigStations {
   put(rig: StationRig): Promise<void>;
   /** Another mass set lies on the turntable from now on: only the simulated rig has to be told. */
   loadMasses(rigId: string, document: RigDocument): void;
-  /** @throws NotYetError for a line that this version may not open */
-  assertAllowed(settings: LinkSettings): Promise<void>;
+  /** Serial ports of this computer, to choose from. */
+  listPorts(): Promise<ListedPort[]>;
   /** Opens a line apart from the rig's own, says hello and tells what answered; nothing moves. Never rejects. */
   tryLine(rig: Pick<StationRig, 'document'>, settings: LinkSettings): Promise<{ ok: boolean; detail: string; firmware: string | null }>;
   onSamples(listener: (batch: LiveSampleBatch) => void): () => void;

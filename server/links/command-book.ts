@@ -89,6 +89,11 @@ export class CommandBook {
   }
 }
 
+/** A time of the host, which means nothing to the controller before its clock is known. */
+export function isTimed(command: LinkCommand): boolean {
+  return command.kind === 'move' && command.startUtcMs !== null;
+}
+
 /** A command's id, of any form, as an identifier of the protocol (FNV-1a, 32 bit). */
 export function tagOf(id: string): string {
   let hash = FNV_OFFSET;

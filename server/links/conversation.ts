@@ -13,7 +13,7 @@ import {
 } from '@/firmware-protocol/codec';
 import type { Clock } from '../interfaces/clock';
 import type { ClockModel } from './clock-model';
-import type { CommandBook } from './command-book';
+import { isTimed, type CommandBook } from './command-book';
 import type { CommandInput } from './command-life';
 import type { ControllerReport } from './controller-report';
 import { EventSequence } from './event-sequence';
@@ -132,7 +132,7 @@ export class Conversation {
 
   /** True when something was sent, or must be waited for, for the sake of a motion. */
   private pumpMotion(): boolean {
-    const { wire, book, lease, report, clock, telling } = this.setting;
+    const { wire, book, lease, report, clock, telling, model } = this.setting;
     const motion = book.first('motion', 'queued');
     if (motion === undefined) return false;
     if (report.has(FLAG.motionEnded)) {
@@ -141,7 +141,7 @@ export class Conversation {
       this.askNext('hello');
       return true;
     }
-    if (lease.isFresh(clock.monotonicMs())) {
+    if (lease.isFresh(clock.monotonicMs()) && (model.known || !isTimed(motion.command))) {
       wire.send(motion);
       return true;
     }

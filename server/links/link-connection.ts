@@ -7,8 +7,8 @@ export interface ConnectionSetting {
   clock: Clock;
   onOpened(line: ByteLine): void;
   onLine(line: string): void;
-  /** Opening failed or the line closed by itself. `forGood`: trying again is of no use. */
-  onFailed(why: string, forGood: boolean): void;
+  /** Opening failed or the line closed by itself. */
+  onFailed(why: string): void;
 }
 
 const FIRST_PAUSE_MS = 250;
@@ -55,12 +55,11 @@ export class LinkConnection {
     if (this.condition === 'ready') this.detail = words ?? 'The controller answers.';
   }
 
-  /** The line is of no use (the caller has closed it): says why, and tries anew after a pause unless it is for good. */
-  failed(condition: 'lost' | 'refused', why: string, forGood = false): void {
+  /** The line is of no use (the caller has closed it): says why, and tries anew after a pause. */
+  failed(condition: 'lost' | 'refused', why: string): void {
     this.opening += 1;
     this.condition = condition;
     this.detail = why;
-    if (forGood) return;
     const pauseMs = Math.min(LONGEST_PAUSE_MS, FIRST_PAUSE_MS * 2 ** this.failures);
     this.failures += 1;
     this.cancelPause();
@@ -78,7 +77,7 @@ export class LinkConnection {
         if (mine === this.opening) onLine(line);
       },
       onClosed: (why: string) => {
-        if (mine === this.opening) onFailed(why, false);
+        if (mine === this.opening) onFailed(why);
       },
     };
     factory.open(handlers).then(
@@ -87,16 +86,8 @@ export class LinkConnection {
         else void line.close();
       },
       (error: unknown) => {
-        if (mine === this.opening) onFailed(messageOf(error), isNotYet(error));
+        if (mine === this.opening) onFailed(error instanceof Error ? error.message : String(error));
       },
     );
   }
-}
-
-function messageOf(error: unknown): string {
-  return error instanceof Error ? error.message : String(error);
-}
-
-function isNotYet(error: unknown): boolean {
-  return typeof error === 'object' && error !== null && 'code' in error && error.code === 'not-yet';
 }

@@ -67,7 +67,7 @@ class LinkDriver implements TurntableLink {
   constructor(private readonly options: LinkOptions) {
     const { clock, rig, factory, epoch } = options;
     const { model, lease, teaching } = this;
-    const metrics = (this.metrics = new LinkMetrics(clock, model, factory.byteTimeMs ?? 0));
+    const metrics = (this.metrics = new LinkMetrics(clock, model, factory));
     const report = (this.report = new ControllerReport(rig));
     const telling = (this.telling = new LinkTelling({ clock, model, report, rig }));
     const wire = (this.wire = new Wire(clock, epoch, () => this.act(() => undefined)));
@@ -82,11 +82,12 @@ class LinkDriver implements TurntableLink {
         this.act(() => {
           this.here = { dropped: 0, answered: false };
           this.lastReply.monotonicMs = clock.monotonicMs();
+          metrics.begin();
           this.talk.begin();
           wire.attach(line);
         }),
       onLine: (line) => this.act(() => this.read(line)),
-      onFailed: (why, forGood) => this.act(() => this.fail(forGood ? 'refused' : 'lost', why, forGood)),
+      onFailed: (why) => this.act(() => this.fail('lost', why)),
     }));
     this.talk = new Conversation({
       ...{ clock, wire, book, telling, model, metrics, teaching, lease, report },
@@ -208,7 +209,8 @@ class LinkDriver implements TurntableLink {
 
   private remark(): string | null {
     const { limits } = this.talk;
-    return limits === null ? null : limitsRemark(this.options.rig, limits);
+    const remarks = [this.wire.lineRemark, limits === null ? null : limitsRemark(this.options.rig, limits)];
+    return remarks.filter((remark) => remark !== null).join(' ') || null;
   }
 
   private read(line: string): void {
@@ -247,10 +249,10 @@ class LinkDriver implements TurntableLink {
   }
 
   /** The line is of no use any more. */
-  private fail(condition: 'lost' | 'refused', why: string, forGood = false): void {
+  private fail(condition: 'lost' | 'refused', why: string): void {
     const before = this.connection.condition;
     void this.letGo();
-    this.connection.failed(condition, why, forGood);
+    this.connection.failed(condition, why);
     if (before === 'ready') this.telling.tell({ kind: 'lost', at: this.telling.now(), why });
     if (condition === 'refused' && before !== 'refused') this.telling.tell({ kind: 'refused-controller', at: this.telling.now(), why });
   }

@@ -1,76 +1,49 @@
-import { realpath, stat } from 'node:fs/promises';
-import { resolve } from 'node:path';
-import { ReadlineParser } from '@serialport/parser-readline';
 import { SerialPort } from 'serialport';
-import { NotYetError } from '@/shared/lib/not-yet-error';
-import type { ByteLine, ByteLineFactory, ByteLineHandlers } from '../interfaces/byte-line';
+import type { ByteLineFactory } from '../interfaces/byte-line';
 import type { Clock } from '../interfaces/clock';
+import type { ListedPort, UsbIdentity } from '../interfaces/serial-ports';
+import { findPort } from './find-port';
+import { LineError } from './line-error';
+import { listPorts } from './port-list';
+import { StreamLine, type ByteStream } from './stream-line';
 
 export interface SerialSettings {
   path: string;
   baudRate: number;
+  /** Which device it was when the path was chosen; it is found again under another name. */
+  usb?: UsbIdentity | undefined;
   /** Levels of the control lines after opening; a port that has no such lines keeps silent about it. */
-  dtr?: boolean;
-  rts?: boolean;
+  dtr?: boolean | undefined;
+  rts?: boolean | undefined;
 }
 
-/** A serial port that cannot be opened; the message says what was tried, what is wrong and what would be right. */
-class LineError extends Error {
-  constructor(
-    readonly code: 'missing' | 'not-a-port' | 'locked' | 'no-permission' | 'failed',
-    message: string,
-  ) {
-    super(message);
-  }
-}
-
-const PSEUDO_TERMINALS = '/dev/pts/';
-/** A write that the port has not taken by then never ends by itself. */
-const WRITE_DEADLINE_MS = 1000;
-/** More bytes than this without a line end do not come from a controller. */
-const MOST_BYTES_WITHOUT_LINE = 4096;
-
-/** @throws NotYetError unless the path leads to a pseudo-terminal; a path that does not exist yet passes if it could become one */
-export async function assertPseudoTerminal(path: string): Promise<void> {
-  const place = await realpath(path).catch(() => resolve(path));
-  const elsewhere = place.startsWith('/dev/') || (await isThere(place));
-  if (elsewhere && !place.startsWith(PSEUDO_TERMINALS)) {
-    throw new NotYetError(
-      `${path} is not a pseudo-terminal. This version opens pseudo-terminals and the simulated turntable only; real ports come with a later one.`,
-    );
-  }
-}
-
-const isThere = (path: string) =>
-  stat(path).then(
-    () => true,
-    () => false,
-  );
+const BITS_PER_BYTE = 10;
 
 /** The line over a serial port. Each opening makes a fresh port object: an old one would send what was written while it was closed. */
-export function serialFactory(settings: SerialSettings, clock: Clock): ByteLineFactory {
+export function serialFactory(settings: SerialSettings, clock: Clock, list: () => Promise<ListedPort[]> = listPorts): ByteLineFactory {
+  let usb = settings.usb ?? null;
+  let byteTimeMs = 0;
   return {
     description: settings.path,
     // A pseudo-terminal does not throttle to the rate: its bytes take no time of their own.
-    byteTimeMs: 0,
+    get byteTimeMs() {
+      return byteTimeMs;
+    },
     open: async (handlers) => {
-      await assertPort(settings.path);
-      await assertPseudoTerminal(settings.path);
-      const port = new SerialPort({ path: settings.path, baudRate: settings.baudRate, autoOpen: false });
-      await openPort(port, settings.path);
+      const found = await findPort({ path: settings.path, usb }, list);
+      const port = new SerialPort({ path: found.path, baudRate: settings.baudRate, autoOpen: false, lock: true });
+      await openPort(port, found.path);
+      usb = found.usb;
+      byteTimeMs = found.isReal ? (BITS_PER_BYTE * 1000) / settings.baudRate : 0;
       setControlLines(port, settings);
-      return new SerialLine(port, handlers, clock);
+      const remark = found.remark === undefined ? {} : { remark: found.remark };
+      const line = new StreamLine({ stream: new PortStream(port), handlers, clock, name: 'the port', ...remark });
+      port.on('error', (error) => line.end(`the port reported an error: ${error.message}`));
+      port.on('close', () => line.end('the port has disappeared'));
+      port.on('data', (chunk: Buffer) => line.take(chunk));
+      return line;
     },
   };
-}
-
-async function assertPort(path: string): Promise<void> {
-  const found = await stat(path).catch(() => null);
-  if (found === null)
-    throw new LineError('missing', `There is no port ${path}. Plug the controller in, or choose the path under which it appears.`);
-  if (found.isDirectory()) throw new LineError('not-a-port', `${path} is a folder, not a serial port. Choose the port's own path.`);
-  if (!found.isCharacterDevice())
-    throw new LineError('not-a-port', `${path} is a file, not a serial port. Choose the path of the controller's port.`);
 }
 
 async function openPort(port: SerialPort, path: string): Promise<void> {
@@ -97,50 +70,19 @@ function setControlLines(port: SerialPort, { dtr, rts }: SerialSettings): void {
   port.set({ ...(dtr === undefined ? {} : { dtr }), ...(rts === undefined ? {} : { rts }) }, () => undefined);
 }
 
-class SerialLine implements ByteLine {
-  private over = false;
-  private bytesWithoutLine = 0;
+class PortStream implements ByteStream {
+  constructor(private readonly port: SerialPort) {}
 
-  constructor(
-    private readonly port: SerialPort,
-    private readonly handlers: ByteLineHandlers,
-    private readonly clock: Clock,
-  ) {
-    port.on('error', (error) => this.end(`the port reported an error: ${error.message}`));
-    port.on('close', () => this.end('the port has disappeared'));
-    port.on('data', (chunk: Buffer) => this.guard(chunk));
-    const lines = port.pipe(new ReadlineParser({ delimiter: '\n', encoding: 'latin1' }));
-    lines.on('data', (line: string) => {
-      if (!this.over) this.handlers.onLine(line);
-    });
+  get isOpen(): boolean {
+    return this.port.isOpen;
   }
 
-  write(bytes: string): void {
-    // What is written to a closed port would be kept and sent when it opens again.
-    if (this.over || !this.port.isOpen) return;
-    const cancel = this.clock.after(WRITE_DEADLINE_MS, () => this.end(`the port took no bytes for ${WRITE_DEADLINE_MS / 1000} s`));
-    this.port.write(bytes, 'latin1', (error) => {
-      cancel();
-      if (error !== null && error !== undefined) this.end(`writing failed: ${error.message}`);
-    });
+  write(bytes: Buffer, taken: (error?: Error | null) => void): void {
+    this.port.write(bytes, taken);
   }
 
   async close(): Promise<void> {
-    this.over = true;
     if (!this.port.isOpen) return;
     await new Promise<void>((done) => this.port.close(() => done()));
-  }
-
-  private guard(chunk: Buffer): void {
-    const end = chunk.lastIndexOf(0x0a);
-    this.bytesWithoutLine = end < 0 ? this.bytesWithoutLine + chunk.length : chunk.length - end - 1;
-    if (this.bytesWithoutLine > MOST_BYTES_WITHOUT_LINE)
-      this.end('bytes without line ends come in: this is not a controller, or the rate is wrong');
-  }
-
-  private end(why: string): void {
-    if (this.over) return;
-    void this.close();
-    this.handlers.onClosed(why);
   }
 }

@@ -49,6 +49,11 @@ export class Wire {
     return this.line !== null;
   }
 
+  /** What is to be said of the line itself. */
+  get lineRemark(): string | null {
+    return this.line?.remark ?? null;
+  }
+
   get inFlight(): LiveRequest | null {
     return this.flight;
   }

@@ -3,6 +3,19 @@ import { rigDocumentSchema } from '../rig/document';
 import { idSchema, instantSchema } from './common';
 import { defineRoute } from './route';
 
+const portFields = {
+  baudRate: z.number().int().min(300).max(1_000_000).default(115200),
+  /** Levels of the control lines after opening; left as they are when absent. */
+  dtr: z.boolean().optional(),
+  rts: z.boolean().optional(),
+};
+/** What tells one USB device from another. */
+export const usbIdentitySchema = z.strictObject({
+  vendorId: z.string().min(1).max(20),
+  productId: z.string().min(1).max(20),
+  serialNumber: z.string().min(1).max(200),
+});
+
 export const linkSettingsSchema = z.discriminatedUnion('kind', [
   z.strictObject({ kind: z.literal('simulated') }),
   /** The controller's own firmware on a board that the server emulates. */
@@ -10,7 +23,22 @@ export const linkSettingsSchema = z.discriminatedUnion('kind', [
   z.strictObject({
     kind: z.literal('serial'),
     path: z.string().min(1).max(300),
-    baudRate: z.number().int().min(300).max(1_000_000).default(115200),
+    ...portFields,
+    /** The device that was listed under the path when it was chosen: it is found again under another name. */
+    usb: usbIdentitySchema.optional(),
+  }),
+  /** A network serial server. Loopback and private addresses are allowed; only the controller's protocol is spoken there. */
+  z.strictObject({
+    kind: z.literal('tcp'),
+    /** A name or an address. */
+    host: z
+      .string()
+      .max(253)
+      .regex(/^[A-Za-z0-9:]([A-Za-z0-9:.-]*[A-Za-z0-9:])?$/, 'a host name or an address is needed, without http:// and without a port'),
+    port: z.number().int().min(1).max(65535),
+    /** `rfc2217` also sets the rate at the other end; `raw` needs it set there. */
+    mode: z.enum(['raw', 'rfc2217']).default('raw'),
+    ...portFields,
   }),
 ]);
 export type LinkSettings = z.infer<typeof linkSettingsSchema>;
@@ -79,7 +107,7 @@ export const createRig = defineRoute({
   idempotent: true,
   body: z.strictObject({ name: z.string().min(1).max(120), document: rigDocumentSchema, link: linkSettingsSchema }),
   response: rigViewSchema,
-  problems: ['invalid-input', 'not-yet'],
+  problems: ['invalid-input'],
 });
 export const getRig = defineRoute({
   name: 'getRig',
@@ -131,7 +159,7 @@ export const changeLink = defineRoute({
   etag: 'required',
   body: linkSettingsSchema,
   response: rigViewSchema,
-  problems: ['invalid-input', 'not-found', 'edited-meanwhile', 'precondition-required', 'rig-busy', 'not-yet'],
+  problems: ['invalid-input', 'not-found', 'edited-meanwhile', 'precondition-required', 'rig-busy'],
 });
 export const tryLink = defineRoute({
   name: 'tryLink',
@@ -142,7 +170,7 @@ export const tryLink = defineRoute({
   status: 200,
   body: linkSettingsSchema,
   response: z.strictObject({ ok: z.boolean(), detail: z.string(), firmware: z.string().nullable() }),
-  problems: ['invalid-input', 'not-found', 'rig-busy', 'not-yet'],
+  problems: ['invalid-input', 'not-found', 'rig-busy'],
 });
 export const arm = defineRoute({
   name: 'arm',

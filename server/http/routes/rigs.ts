@@ -61,7 +61,6 @@ const rigRouteList = [
 
   mount(contracts.createRig, async (context) => {
     const { body, membership, services } = context;
-    await services.stations.assertAllowed(body.link);
     const entry = { kind: 'rig.added', data: (rigId: string) => ({ rigId, name: body.name }) };
     const rigId = await audited(context, entry, (tx) =>
       store.createRig(tx, { labId: membership.labId, ...body, massSetLabel: 'As in the rig document' }, makerOf(context)),
@@ -131,7 +130,6 @@ const linkRoutes = [
         `Somebody chose another line for ${before.name} after you opened this page. Look at it as it is now, then choose yours.`,
       );
     await assertUntouched(services, before);
-    await services.stations.assertAllowed(body);
     const entry = { kind: 'rig.link-changed', data: () => ({ rigId: before.id, from: before.link, to: body }) };
     await audited(context, entry, (tx) =>
       store.changeRigLink(tx, { labId: before.labId, rigId: before.id, settings: body }, makerOf(context)),
@@ -145,7 +143,6 @@ const linkRoutes = [
   mount(contracts.tryLink, async (context) => {
     const rig = await load(context, context.params.rigId);
     await assertUntouched(context.services, rig);
-    await context.services.stations.assertAllowed(context.body);
     return context.services.stations.tryLine(rig, context.body);
   }),
 ];

@@ -95,12 +95,13 @@ describe('a rig', () => {
 
 describe('the line', () => {
   test.each([
-    ['/dev/null', 'not a pseudo-terminal'],
-    ['/dev/ttyUSB0', 'not a pseudo-terminal'],
-  ])('at %s is refused as not built yet', async (path, words) => {
+    ['http://10.0.0.4', 4001],
+    ['rig-lab.example', 0],
+    ['', 4001],
+  ])('to a network serial server needs an address and a port: not %p, port %d', async (host, port) => {
     const { etag } = (await lab.as('keeper', 'GET', rig)).headers as { etag: string };
-    const answer = await lab.as('keeper', 'PUT', `${rig}/link`).set('If-Match', etag).send({ kind: 'serial', path }).expect(422);
-    expect(answer.body).toMatchObject({ code: 'not-yet', detail: expect.stringContaining(words) });
+    const answer = await lab.as('keeper', 'PUT', `${rig}/link`).set('If-Match', etag).send({ kind: 'tcp', host, port }).expect(400);
+    expect(answer.body.errors[0].path).toBe(port === 0 ? 'port' : 'host');
     expect((await lab.as('viewer', 'GET', rig)).body.link).toEqual({ kind: 'simulated' });
   });
 
