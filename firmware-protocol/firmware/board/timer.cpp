@@ -18,8 +18,8 @@ constexpr uint8_t RISES = _BV(COM1A1) | _BV(COM1A0);
 constexpr uint8_t FALLS = _BV(COM1A1);
 /** Less than this, in ticks, is too near to be armed. */
 constexpr uint8_t NEAR = 16;
-/** A pulse lasts at least so many loops of 3 cycles: 2 µs. */
-constexpr uint8_t PULSE_LOOPS = 11;
+/** A pulse lasts at least so many loops of 3 cycles: 5 µs. */
+constexpr uint8_t PULSE_LOOPS = 27;
 constexpr int32_t ONE_TURN = 65000;
 
 volatile uint16_t turns;

@@ -12,6 +12,8 @@ void changed(Tick at);
 void tell();
 /** Levels as told so far, `hal::FLAG_COVERED` and so on. */
 uint8_t levels();
+/** Levels as they are now, with every contact open that was open a moment ago. Also in interrupts. */
+uint8_t safest();
 inline bool covered() { return (levels() & hal::FLAG_COVERED) != 0; }
 inline bool interlockClosed() { return (levels() & hal::INTERLOCK_CLOSED) != 0; }
 inline bool supplyPresent() { return (levels() & hal::SUPPLY_PRESENT) != 0; }

@@ -144,7 +144,7 @@ Cause hindrance(uint8_t levels, Tick at) {
 
 void test() {
   if (active.launch != Launch::armed) return;
-  active.cause = hindrance(hal::inputs(), active.begin);
+  active.cause = hindrance(inputs::safest(), active.begin);
   if (active.cause != Cause::done) {
     active.launch = Launch::refused;
     return;

@@ -148,3 +148,24 @@ describe('a waiting move is cancelled without a step', () => {
     expect(run.of('began').filter(({ tag }) => tag === '0000AAAB')).toHaveLength(net);
   });
 });
+
+test('a contact that bounces is told once each way: opening at once, closing when it has come to rest, with the time of that', () => {
+  const script = new FirmwareScript().wait(100);
+  const bounce = (input: 'interlock' | 'supply', on: boolean) => {
+    const beganMs = script.now;
+    for (let count = 0; count < 5; count += 1) script.input(input, on).wait(2).input(input, !on).wait(1);
+    script.input(input, on).wait(200);
+    return beganMs;
+  };
+  const opened = [bounce('interlock', false), bounce('supply', false)];
+  const closed = [bounce('interlock', true), bounce('supply', true)];
+  const told = script
+    .run()
+    .events.slice(1)
+    .map(({ atUs, what }) => [what.word, 'closed' in what ? what.closed : 'present' in what && what.present, atUs]);
+  const words = ['interlock', 'supply'];
+  expect(told).toEqual([
+    ...words.map((word, index) => [word, false, (opened[index] as number) * 1000]),
+    ...words.map((word, index) => [word, true, ((closed[index] as number) + 15) * 1000]),
+  ]);
+});
