@@ -32,6 +32,10 @@ uint32_t fresh;
 uint32_t again;
 uint8_t againLeft;
 
+bool isBefore(const Stamp& stamp, const Event& event) {
+  return stamp.seconds < event.seconds || (stamp.seconds == event.seconds && stamp.micros < event.micros);
+}
+
 void compose(Writer& writer, uint32_t number) {
   const Event& event = ring[number % EVENT_RING];
   const Kind kind = static_cast<Kind>(event.kind);
@@ -92,8 +96,11 @@ void start() {
 }
 
 void note(Kind kind, Tick at, uint32_t tag, int32_t place, uint8_t which) {
+  const Event& before = ring[last % EVENT_RING];
+  Stamp stamp = clock::stampOf(at);
+  // The flag is seen a few µs after the step that moved it: an event is not older than the one before, or the clock would seem to step.
+  if (last != 0 && isBefore(stamp, before)) stamp = Stamp{before.seconds, before.micros};
   last += 1;
-  const Stamp stamp = clock::stampOf(at);
   Event& event = ring[last % EVENT_RING];
   event.seconds = stamp.seconds;
   event.micros = stamp.micros;
