@@ -1,5 +1,6 @@
 import type { RehearsalParts } from '../engine/rehearsal/rehearsal-parts';
 import { sha256Hex } from '../evaluation/sha256';
+import { createEmulatedController } from '../links/board/board-controller';
 import { createLink } from '../links/link-driver';
 import { createSimulatedController } from '../links/simulated-controller';
 
@@ -19,10 +20,10 @@ function createSettle(): () => Promise<void> {
   };
 }
 
-/** The parts of every rehearsal: the real link and codec on the light simulated controller. */
-export const rehearsalParts = (): RehearsalParts => ({
+/** The parts of every rehearsal: the real link and codec, on the light simulated controller or on the emulated board. */
+export const rehearsalParts = (controller: 'light' | 'board' = 'light'): RehearsalParts => ({
   sha256: sha256Hex,
   settle: createSettle(),
   createLink,
-  createController: createSimulatedController,
+  createController: controller === 'board' ? createEmulatedController : createSimulatedController,
 });

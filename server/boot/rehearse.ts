@@ -46,12 +46,13 @@ interface Request extends Choice {
   folder: string;
   startUtcMs: number;
   simulated: SimulatedRun;
+  /** On the emulated controller board instead of the light simulated controller. */
+  board: boolean;
 }
 
 function requested(args: readonly string[]): Request {
   const { values, positionals } = parsedArguments(args);
   if (values['draw-geometry']) throw new NotYetError('--draw-geometry is not built yet: the geometry is exactly as in the rig document.');
-  if (values.board) throw new NotYetError('--board is not built yet: the light simulated controller is used.');
   const { document, rig } = chosenProtocol({ positionals, template: values.template, rig: values.rig, usage });
   const startUtcMs = instant(values.start);
   const simulated = {
@@ -60,7 +61,7 @@ function requested(args: readonly string[]): Request {
     rateHz: sampleRate(values.rate),
     faults: values.fault.map(faultOf),
   };
-  return { document, rig, startUtcMs, simulated, folder: emptyFolder(values.out) };
+  return { document, rig, startUtcMs, simulated, board: values.board, folder: emptyFolder(values.out) };
 }
 
 function parsedArguments(args: readonly string[]) {
@@ -144,8 +145,8 @@ function assertSimulable(rig: RigDocument): void {
 }
 
 /** The rehearsal's id: the same for the same input. */
-function runIdOf({ document, rig, startUtcMs, simulated }: Request): string {
-  const hash = sha256Hex(canonicalJson({ document, rig, startUtcMs, simulated }));
+function runIdOf({ document, rig, startUtcMs, simulated, board }: Request): string {
+  const hash = sha256Hex(canonicalJson({ document, rig, startUtcMs, simulated, ...(board ? { board } : {}) }));
   return [hash.slice(0, 8), hash.slice(8, 12), `8${hash.slice(13, 16)}`, `8${hash.slice(17, 20)}`, hash.slice(20, 32)].join('-');
 }
 
@@ -198,7 +199,7 @@ async function run(args: readonly string[]): Promise<Record<string, unknown>> {
   assertSimulable(rig);
   makeFolder(folder);
   const start = runStart(request);
-  const result = await rehearse({ start, startUtcMs }, rehearsalParts());
+  const result = await rehearse({ start, startUtcMs }, rehearsalParts(request.board ? 'board' : 'light'));
   writeArchive(folder, start, result);
   return {
     outcome: result.outcome,

@@ -46,6 +46,20 @@ export function ordersConformance(maker: BenchMaker, scene: Scene): void {
     expect(scene.watch.order('accepted', 'motion-began', 'motion-ended')).toEqual(['accepted', 'motion-began', 'motion-ended']);
   });
 
+  test('homes to the edge from either side of it, and stands there at the home angle', async () => {
+    await scene.begin();
+    await scene.watch.ready();
+    for (const fromDeg of [3, -2]) {
+      const away = scene.watch.move(fromDeg);
+      await scene.watch.get('motion-ended', { of: away });
+      const home = scene.watch.send((id) => ({ kind: 'home', id }));
+      expect(await scene.watch.get('homed', { of: home })).toMatchObject({ angleDeg: 0 });
+      expect(await scene.bench.trueAngleDeg()).toBeCloseTo(0, 9);
+    }
+    expect(scene.watch.all('reset')).toEqual([]);
+    expect(scene.watch.link.health()).toMatchObject({ condition: 'ready', discardedLines: 0 });
+  });
+
   test('refuses a beginning in the past and a target outside its travel, and says why', async () => {
     await scene.begin();
     await scene.watch.ready();
