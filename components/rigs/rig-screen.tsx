@@ -1,15 +1,16 @@
 import { useLocalSearchParams, useRouter, type Href } from 'expo-router';
 import { useState } from 'react';
 import { View } from 'react-native';
-import { useMay, wordsOf } from '@/components/api';
+import { useLab, useMay, wordsOf } from '@/components/api';
 import { PlanView } from '@/components/charts/plan-view';
-import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, useWide } from '@/components/ui';
+import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, Section, useWide } from '@/components/ui';
 import type { RigView } from '@/shared/contracts/rigs';
 import { ArmPanel } from './arm-panel';
 import { linkState } from './link-words';
 import { LinkPanel } from './link-panel';
 import { LiveFacts } from './live-facts';
 import { MassSets } from './mass-sets';
+import { PositionFacts } from './position-facts';
 import { RigDocumentSection } from './rig-document-section';
 import { RunningNow } from './running-now';
 import { useRig } from './use-rig';
@@ -56,6 +57,7 @@ export function RigScreen() {
     >
       <RunningNow rig={rig} />
       <LivePanel rig={rig} />
+      <PositionPanel rig={rig} />
       <ArmPanel rig={rig} />
       <LinkPanel rig={rig} />
     </Screen>
@@ -72,6 +74,18 @@ function LivePanel({ rig }: { rig: RigView }) {
       </View>
       <Label>{rig.live.detail}</Label>
     </Panel>
+  );
+}
+
+/** Without an encoder the home edge is what a counted angle is held against. */
+function PositionPanel({ rig }: { rig: RigView }) {
+  const { timeZone } = useLab();
+  return (
+    <Section title="Position">
+      <Panel edge={rig.position?.slippedAt == null ? undefined : 'danger'}>
+        <PositionFacts position={rig.position} timeZone={timeZone} />
+      </Panel>
+    </Section>
   );
 }
 

@@ -4,12 +4,21 @@ import { formatDuration } from '@/shared/lib/format-duration';
 /** What the row of the step says already. */
 const saidAbove: ReadonlySet<string> = new Set(['seq', 'path', 'kind', 'label', 'station', 'commandId']);
 
-const names: Record<string, string> = { bootId: 'boot id', gapS: 'gap', angleDeg: 'angle', offDeg: 'off by', sha256: 'SHA-256' };
+const names: Record<string, string> = {
+  bootId: 'boot id',
+  gapS: 'gap',
+  angleDeg: 'angle',
+  offDeg: 'off by',
+  slipDeg: 'slip',
+  slipSteps: 'slip in microsteps',
+  toleranceDeg: 'tolerance',
+  sha256: 'SHA-256',
+};
 
 function valueWords(name: string, value: unknown): string {
   if (typeof value === 'number') {
     if (name.endsWith('S')) return value < 60 ? `${value.toFixed(1)} s` : formatDuration(value);
-    if (name.endsWith('Deg')) return formatDegrees(value, name === 'offDeg' ? 4 : 2);
+    if (name.endsWith('Deg')) return formatDegrees(value, name === 'angleDeg' ? 2 : 3);
   }
   if (typeof value === 'boolean') return value ? 'yes' : 'no';
   return typeof value === 'object' ? JSON.stringify(value) : String(value);

@@ -3,6 +3,7 @@ import { View } from 'react-native';
 import { useLab, wordsOf } from '@/components/api';
 import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, useWide } from '@/components/ui';
 import type { RunView } from '@/shared/contracts/runs';
+import { PositionFacts } from '@/components/rigs/position-facts';
 import { ControlBar } from './control-bar';
 import { HeldNotice } from './held-notice';
 import { linkAge } from './link-age';
@@ -76,6 +77,7 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
     >
       <RunHead view={view} timeZone={timeZone} serverNowMs={serverNowMs} lost={lost} />
       <LostNotice age={age} />
+      <SlipNotice view={view} timeZone={timeZone} />
       <HeldNotice view={view} timeZone={timeZone} serverNowMs={serverNowMs} />
       <LiveStrip strip={strip} timeZone={timeZone} serverNowMs={serverNowMs} title={`${view.rigName}, ${view.protocolName}`} lost={lost} />
       <AfterDwell view={view} onTap={() => tap('hold-after-dwell')} />
@@ -83,6 +85,16 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
       {wide ? null : log}
       <Facts view={view} />
     </Screen>
+  );
+}
+
+/** A wrong count stands above all else, with what is known of it. */
+function SlipNotice({ view, timeZone }: { view: RunView; timeZone: string }) {
+  if (view.position === null || view.position.slippedAt === null) return null;
+  return (
+    <Panel edge="danger" testID="slip-notice">
+      <PositionFacts position={view.position} timeZone={timeZone} />
+    </Panel>
   );
 }
 

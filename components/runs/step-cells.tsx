@@ -6,7 +6,7 @@ import { formatDelay, formatTimeUncertainty } from '@/shared/lib/format-duration
 import { formatSignificant } from '@/shared/lib/format-number';
 import { formatLocalHonest, formatUtcHonest } from '@/shared/lib/format-time';
 import { stepMark, stepTitle } from './run-words';
-import { outcomeOf } from './step-filter';
+import { isUnproved, outcomeOf } from './step-filter';
 
 export interface TimeBase {
   /** IANA zone, or null for UTC. */
@@ -72,7 +72,21 @@ export function AngleCell({ row }: { row: StepRowView }) {
           </Num>
         )}
       </View>
-      <Label className="whitespace-nowrap">{moved ? `from ${formatDegrees(row.angleStartDeg)}` : row.angleSource}</Label>
+      {moved ? <Label className="whitespace-nowrap">from {formatDegrees(row.angleStartDeg)}</Label> : null}
+      <AngleSource row={row} />
+    </View>
+  );
+}
+
+/** Where the angle comes from; a dwell whose angle nothing proves carries a mark. */
+function AngleSource({ row }: { row: StepRowView }) {
+  if (!isUnproved(row)) return <Label className="whitespace-nowrap">{row.angleSource}</Label>;
+  return (
+    <View className="flex-row items-center gap-1" testID="angle-unproved">
+      <Icon name="warning" size={14} tone="lamp" />
+      <Label tone="lamp" className="whitespace-nowrap">
+        counted, not proved
+      </Label>
     </View>
   );
 }

@@ -4,7 +4,7 @@ import type { StepRowView } from '@/shared/contracts/runs';
 export interface StepFilter {
   kind: string;
   station: string;
-  /** An outcome, `running`, or `not good`. */
+  /** An outcome, `running`, `not good`, or `not proved`. */
   outcome: string;
 }
 
@@ -17,8 +17,15 @@ export function outcomeOf(row: Pick<StepRowView, 'outcome' | 'good'>): string {
   return row.good === false ? `${outcome}, not good` : outcome;
 }
 
-const matchesOutcome = (row: StepRowView, wanted: string) =>
-  wanted === everything || (wanted === 'not good' ? row.good === false : (row.outcome ?? 'running') === wanted);
+/** A dwell whose angle was only counted: no pass of the home edge proves it. */
+export const isUnproved = (row: Pick<StepRowView, 'kind' | 'angleSource'>): boolean =>
+  row.kind === 'dwell' && row.angleSource === 'counted';
+
+function matchesOutcome(row: StepRowView, wanted: string): boolean {
+  if (wanted === everything) return true;
+  if (wanted === 'not good') return row.good === false;
+  return wanted === 'not proved' ? isUnproved(row) : (row.outcome ?? 'running') === wanted;
+}
 
 export function filterSteps(rows: readonly StepRowView[], filter: StepFilter): StepRowView[] {
   return rows.filter(
@@ -36,6 +43,10 @@ export function filterChoices(rows: readonly StepRowView[]): Record<keyof StepFi
   return {
     kind: distinct(rows.map((row) => row.kind)),
     station: distinct(rows.map((row) => row.station)),
-    outcome: [...distinct(rows.map((row) => row.outcome ?? 'running')), ...(rows.some((row) => row.good === false) ? ['not good'] : [])],
+    outcome: [
+      ...distinct(rows.map((row) => row.outcome ?? 'running')),
+      ...(rows.some((row) => row.good === false) ? ['not good'] : []),
+      ...(rows.some(isUnproved) ? ['not proved'] : []),
+    ],
   };
 }

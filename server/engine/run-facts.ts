@@ -5,7 +5,7 @@ import type { RunSummaryColumns } from '../interfaces/run-store';
 import { Draft, nothingOut } from './draft';
 import { resumeRefusal } from './halting';
 import { predictEndUtcMs } from './predicted-end';
-import type { Arm, ChartState, InterventionKind, RunSnapshot } from './run-context';
+import type { Arm, ChartState, InterventionKind, KnownPosition, RunSnapshot } from './run-context';
 
 /** What screens and lists show of a run, read off its snapshot. */
 export interface RunFacts {
@@ -22,6 +22,8 @@ export interface RunFacts {
   dwellsDone: number;
   dwellsPlanned: number;
   holdAfterDwell: boolean;
+  /** What proves the counted angle; null where nothing was kept. */
+  position: KnownPosition | null;
   intervention: { kind: InterventionKind; by: string; serverAtUtcMs: number; confirmedAtUtcMs: number | null } | null;
   mayResume: { ok: boolean; why: string };
   /** Last sequence number of the event chain. */
@@ -95,6 +97,7 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lastSeq, predictedEndU
     dwellsDone: context.dwellsDone,
     dwellsPlanned,
     holdAfterDwell: context.holdAfterStep !== null,
+    position: context.position,
     intervention:
       intervention === null
         ? null

@@ -1,9 +1,12 @@
 import type { ArmView, RigLive, RigSummary, RigView } from '@/shared/contracts/rigs';
 import type { StandingArm } from '../interfaces/arm-keeper';
 import type { RigStation } from '../interfaces/rig-stations';
+import type { KnownPosition } from '../engine/run-context';
+import { restored } from '../engine/stored-snapshot';
 import { listMassSets, type RigRecord } from '../store/rigs';
-import { activeRuns, type RunListRow } from '../store/runs-read';
+import { activeRuns, newestSnapshots, type RunListRow } from '../store/runs-read';
 import { isoOf, isoOrNull } from './maker';
+import { positionViewOf } from './position-view';
 import type { Services } from './services';
 
 const linkTag = (services: Services, rig: RigRecord) => services.sha256(JSON.stringify(rig.link)).slice(0, 12);
@@ -77,5 +80,24 @@ export function rigSummaryOf(services: Services, rig: RigRecord, run: RunListRow
 export async function rigViewOf(services: Services, rig: RigRecord): Promise<RigView> {
   const { db } = services.database;
   const runs = await activeRuns(db, rig.labId);
-  return { ...rigSummaryOf(services, rig, runs.get(rig.id)), document: rig.document, massSets: await listMassSets(db, rig.labId, rig.id) };
+  return {
+    ...rigSummaryOf(services, rig, runs.get(rig.id)),
+    document: rig.document,
+    massSets: await listMassSets(db, rig.labId, rig.id),
+    position: await positionOf(services, rig),
+  };
 }
+
+/** From the run that goes on, or else from the newest that has met the edge. */
+async function positionOf(services: Services, rig: RigRecord): Promise<RigView['position']> {
+  const active = services.supervisor.activeOf(rig.id);
+  const now = active?.facts().position ?? null;
+  if (active !== null && now !== null && hasMetEdge(now)) return { ...positionViewOf(rig.document, now), runId: active.runId };
+  for (const run of await newestSnapshots(services.database.db, { labId: rig.labId, rigId: rig.id })) {
+    const position = restored(run.snapshot, run.chartVersion)?.context.position;
+    if (position !== undefined && hasMetEdge(position)) return { ...positionViewOf(run.start.rig, position), runId: run.id };
+  }
+  return null;
+}
+
+const hasMetEdge = ({ proof }: KnownPosition) => proof.proved !== null || proof.slip !== null;

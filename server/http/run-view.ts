@@ -4,6 +4,7 @@ import { factsOf, plannedDwells, type RunFacts } from '../engine/run-facts';
 import { restored } from '../engine/stored-snapshot';
 import { readSteps, type RunListRow, type RunRecord } from '../store/runs-read';
 import { isoOf, isoOrNull } from './maker';
+import { positionViewOf } from './position-view';
 import type { Services } from './services';
 
 /** What a list shows of a run. */
@@ -47,6 +48,7 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
     dwellsDone: facts.dwellsDone,
     dwellsPlanned: facts.dwellsPlanned,
     holdAfterDwell: facts.holdAfterDwell,
+    position: facts.position === null ? null : positionViewOf(start.rig, facts.position),
     intervention:
       facts.intervention === null
         ? null
@@ -91,6 +93,7 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
     dwellsDone: steps.filter((step) => step.kind === 'dwell' && step.outcome === 'done').length,
     dwellsPlanned,
     holdAfterDwell: false,
+    position: null,
     intervention: null,
     mayResume: { ok: false, why: 'The run is not driven by this server.' },
     lastSeq: run.lastSeq,

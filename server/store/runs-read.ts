@@ -83,6 +83,21 @@ export async function activeRuns(db: Handle, labId: string): Promise<Map<string,
   return new Map(rows.map((row) => [row.rigId, row]));
 }
 
+/** What the engine has kept of the newest runs on a rig, newest first: those that count when one of them met the home edge. */
+export function newestSnapshots(
+  db: Handle,
+  { labId, rigId }: { labId: string; rigId: string },
+): Promise<Pick<RunRecord, 'id' | 'start' | 'snapshot' | 'chartVersion'>[]> {
+  return db
+    .select({ id: runs.id, start: runs.start, snapshot: runs.snapshot, chartVersion: runs.chartVersion })
+    .from(runs)
+    .where(and(eq(runs.labId, labId), eq(runs.rigId, rigId), eq(runs.rehearsal, false)))
+    .orderBy(desc(runs.createdAt))
+    .limit(snapshotsSearched);
+}
+
+const snapshotsSearched = 5;
+
 /** The step log of a run in order, or those rows of it that are asked for. */
 export async function readSteps(db: Handle, run: { labId: string; runId: string }, seqs?: readonly number[]): Promise<StepRow[]> {
   const ofRun = and(eq(runSteps.labId, run.labId), eq(runSteps.runId, run.runId));

@@ -7,6 +7,7 @@ import { channelPath, readChannel, type SampleColumns } from './channel-csv';
 import { exclusionsFile, readExclusions, type Exclusion } from './exclusions';
 import type { ChannelInfo, StepRow } from './run-records';
 import { readSteps, stepsFile } from './step-csv';
+import { unprovedDwells } from './unproved-dwells';
 import { firstIssue, UnusableArchive } from './unusable-archive';
 import { readPackage, verifyFiles, type PackageDescriptor, type ResourceDescriptor } from './verify-package';
 import { verifyArchived, verifyEvents, type ArchiveChain } from './verify-events';
@@ -51,7 +52,9 @@ export function readArchive(files: ArchiveFiles, sha256: Sha256OfBytes): Archive
   verifyFiles(descriptor, inHand);
   verifyArchived(verified, inHand);
   const rig = readArchivedRig(parseJson(files, 'rig.json'), warnings);
-  const steps = readSteps(requiredText(files, stepsFile));
+  const stepText = requiredText(files, stepsFile);
+  const steps = readSteps(stepText);
+  warnings.push(...unprovedDwells(stepText, steps));
   const { protocol, registered } = readProtocol(files, warnings);
   const exclusions = files.has(exclusionsFile) ? readExclusions(requiredText(files, exclusionsFile)) : [];
   const resources = channelResources(descriptor);

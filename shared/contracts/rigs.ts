@@ -1,6 +1,7 @@
 import * as z from 'zod';
 import { rigDocumentSchema } from '../rig/document';
 import { idSchema, instantSchema } from './common';
+import { positionViewSchema } from './position';
 import { defineRoute } from './route';
 
 const portFields = {
@@ -81,7 +82,12 @@ export const rigSummarySchema = z.strictObject({
   arm: armViewSchema.nullable(),
   activeRun: z.strictObject({ id: idSchema, state: z.string(), protocolName: z.string() }).nullable(),
 });
-export const rigViewSchema = rigSummarySchema.extend({ document: rigDocumentSchema, massSets: z.array(massSetViewSchema) });
+export const rigViewSchema = rigSummarySchema.extend({
+  document: rigDocumentSchema,
+  massSets: z.array(massSetViewSchema),
+  /** What the newest run that met the home edge says of the position; null before the first. */
+  position: positionViewSchema.extend({ runId: idSchema }).nullable(),
+});
 export type RigSummary = z.infer<typeof rigSummarySchema>;
 export type RigView = z.infer<typeof rigViewSchema>;
 

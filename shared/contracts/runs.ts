@@ -2,6 +2,7 @@ import * as z from 'zod';
 import { protocolDocumentSchema } from '../protocol/document';
 import { rigDocumentSchema } from '../rig/document';
 import { idSchema, instantSchema, pageOf, pageQuerySchema } from './common';
+import { positionViewSchema } from './position';
 import { defineRoute } from './route';
 
 export const runStates = ['rehearsing', 'starting', 'running', 'holding', 'held', 'stopping', 'finished', 'stopped', 'failed'] as const;
@@ -75,6 +76,8 @@ export const runViewSchema = runSummarySchema.extend({
   dwellsDone: z.number().int(),
   dwellsPlanned: z.number().int(),
   holdAfterDwell: z.boolean(),
+  /** How well the counted angle is proved; null where the engine has kept nothing of the run. */
+  position: positionViewSchema.nullable(),
   intervention: interventionSchema.nullable(),
   mayResume: z.strictObject({ ok: z.boolean(), why: z.string() }),
   /** Last sequence number of the event chain. */
@@ -97,6 +100,7 @@ const runProgressSchema = runViewSchema.pick({
   dwellsDone: true,
   dwellsPlanned: true,
   holdAfterDwell: true,
+  position: true,
   intervention: true,
   mayResume: true,
   lastSeq: true,

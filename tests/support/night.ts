@@ -173,7 +173,15 @@ function motion(
 function rowsOf(move: Move, plan: NightPlan, seq: number): StepRow[] {
   const instant = (tS: number) => nightStartUtcMs + tS * 1000;
   const [start, middle, end] = [move.startS, move.startS + move.durationS, move.startS + move.durationS + plan.dwellS];
-  const base = { label: '', station: '', uStartS: 0, uEndS: 0, outcome: 'done' as const, angleSource: 'counted' as const, uAngleDeg: 0 };
+  const base = {
+    label: '',
+    station: '',
+    uStartS: 0,
+    uEndS: 0,
+    outcome: 'done' as const,
+    angleSource: 'edge-verified' as const,
+    uAngleDeg: 0,
+  };
   const times = (from: number, to: number) => ({
     plannedStartUtcMs: instant(from),
     plannedEndUtcMs: instant(to),

@@ -23,7 +23,7 @@ function stepRow(seq: number, changes: Partial<StepRow> = {}): StepRow {
     angleStartDeg: 20.18,
     angleEndDeg: 20.18,
     outcome: 'done',
-    angleSource: 'counted',
+    angleSource: 'edge-verified',
     uAngleDeg: 0.01,
     good: true,
     ...changes,

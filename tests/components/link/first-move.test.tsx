@@ -29,7 +29,7 @@ const live = {
 };
 const rig = {
   ...{ id: 'rig-1', name: 'North bench', revision: 3, link: { kind: 'simulated' }, live, arm, activeRun: null },
-  ...{ document: demoRigWide, massSets: [] },
+  ...{ document: demoRigWide, massSets: [], position: null },
 };
 const controller = {
   ...{ bootId: '0000AB01', firmware: 'evenfall-0.1', positionKnown: true, angleDeg: 0, moving: false, interlockClosed: true },

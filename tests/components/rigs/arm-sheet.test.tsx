@@ -13,6 +13,7 @@ const rig: RigView = {
   link: { kind: 'simulated' },
   arm: null,
   activeRun: null,
+  position: null,
   document: demoRigWide,
   massSets: [],
   live: {

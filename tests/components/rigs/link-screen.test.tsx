@@ -32,6 +32,7 @@ const rig = {
   activeRun: null,
   document: demoRigWide,
   massSets: [],
+  position: null,
 };
 
 function Page() {

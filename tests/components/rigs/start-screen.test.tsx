@@ -73,6 +73,7 @@ async function open(options: { armed: boolean }): Promise<FakeLab> {
     arm: options.armed ? arm : null,
     activeRun: null,
     document: demoRigWide,
+    position: null,
     massSets: [{ id: 'm1', label: 'Lead spheres', sources: demoRigWide.sources }],
   };
   lab.on('GET /labs/lab-1/rigs/rig-1', () => ({ body: rig, etag: '"1"' }));

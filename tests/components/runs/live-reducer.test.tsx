@@ -24,9 +24,31 @@ describe('what arrives', () => {
   });
 
   test('progress moves what changes and keeps the rest; what was overtaken changes nothing', () => {
-    const { state, startedAt, endedAt, predictedEndAt, deadlineAt, dwellsDone, dwellsPlanned, holdAfterDwell, intervention, mayResume } =
-      viewAt(nowUtcMs);
-    const same = { startedAt, endedAt, predictedEndAt, deadlineAt, dwellsDone, dwellsPlanned, holdAfterDwell, intervention, mayResume };
+    const {
+      state,
+      startedAt,
+      endedAt,
+      predictedEndAt,
+      deadlineAt,
+      dwellsDone,
+      dwellsPlanned,
+      holdAfterDwell,
+      position,
+      intervention,
+      mayResume,
+    } = viewAt(nowUtcMs);
+    const same = {
+      startedAt,
+      endedAt,
+      predictedEndAt,
+      deadlineAt,
+      dwellsDone,
+      dwellsPlanned,
+      holdAfterDwell,
+      position,
+      intervention,
+      mayResume,
+    };
     const [, row] = rowsAt(nowUtcMs);
     const progress = (lastSeq: number, change: Partial<{ state: 'held'; reason: string }>): LiveMessage => ({
       type: 'progress',

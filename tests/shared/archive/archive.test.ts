@@ -67,7 +67,7 @@ describe('an archive written by Evenfall', () => {
       'seq,path,kind,label,station,planned_start_utc,planned_end_utc,start_utc,end_utc,u_start_s,u_end_s,angle_start_deg,angle_end_deg,outcome,angle_source,u_angle_deg,good',
     );
     expect(second).toBe(
-      `2,2.dwell,dwell,"'=SUM(A1), ""quoted""",near,2026-03-01T22:03:20.000000Z,2026-03-01T22:04:50.000000Z,2026-03-01T22:03:20.000125Z,2026-03-01T22:04:50.000500Z,0.001,0.001,20.18,20.18,done,counted,0.01,true`,
+      `2,2.dwell,dwell,"'=SUM(A1), ""quoted""",near,2026-03-01T22:03:20.000000Z,2026-03-01T22:04:50.000000Z,2026-03-01T22:03:20.000125Z,2026-03-01T22:04:50.000500Z,0.001,0.001,20.18,20.18,done,edge-verified,0.01,true`,
     );
   });
 
