@@ -16,9 +16,9 @@ export function HaltBar({ rigId, line }: { rigId: string; line: LineMessage | nu
   // A halt from before this guided move is history.
   const known = halt === null || (since !== null && halt.serverAt < since) ? null : halt;
   const stages = stagesOf(local, known, known?.kind === 'stop' ? 'stopped' : 'held');
-  const lastOrder = line?.guided?.order?.state;
-  const over =
-    local.kind === 'idle' && (lastOrder === 'sent' || lastOrder === 'accepted' || lastOrder === 'moving' || lastOrder === 'done');
+  const order = line?.guided?.order ?? null;
+  // So is one from before a newer order.
+  const over = known !== null && order !== null && order.at > known.serverAt && local.kind !== 'sending';
   return (
     <View className="gap-3" testID="halt-bar">
       {stages === null || over ? null : <InterventionStages stages={stages} timeZone={timeZone} />}

@@ -2,7 +2,7 @@ import { View } from 'react-native';
 import { useMay } from '@/components/api';
 import { MayNote } from '@/components/people/may-note';
 import { Body, Button, Icon, Label, Num, Panel, ProblemNotice, Row, Section } from '@/components/ui';
-import { formatSignificant, withUnit } from '@/shared/lib/format-number';
+import { formatFixed, withUnit } from '@/shared/lib/format-number';
 import { homeSpeedDegS } from '@/shared/protocol/durations';
 import { compareLimits, type LimitRow } from '@/shared/rig/travel';
 import type { StepProps } from './step-props';
@@ -13,7 +13,7 @@ const stateWords: Record<LimitRow['state'], string> = {
   tighter: 'the controller allows less',
 };
 
-const amount = (value: number, unit: string) => withUnit(formatSignificant(value, 5), unit);
+const amount = (value: number, unit: string) => withUnit(formatFixed(value, { decimals: 3 }), unit);
 
 /** Step 4: the limits of the rig document are written to the controller, which then guards them by itself. */
 export function LimitsStep({ rig, etag, motion, line, guided }: StepProps) {
@@ -64,12 +64,8 @@ function LimitLine({ row, last }: { row: LimitRow; last: boolean }) {
       <Icon name={icon} size={18} tone={tone} />
       <View className="min-w-0 flex-1">
         <Body>{row.label}</Body>
-        <Label>{stateWords[row.state]}</Label>
-      </View>
-      <View className="items-end">
-        <Num>{amount(row.controller, row.unit)}</Num>
-        <Num tone="dim" size={13}>
-          {amount(row.document, row.unit)} in the document
+        <Num aside={row.state === 'same' ? stateWords.same : `document ${amount(row.document, row.unit)}: ${stateWords[row.state]}`}>
+          {amount(row.controller, row.unit)}
         </Num>
       </View>
     </Row>

@@ -30,7 +30,7 @@ function HealthLine({ row }: { row: HealthRow }) {
     <View className="gap-0.5">
       <View className="flex-row items-start gap-2">
         <View className="pt-0.5">
-          <Icon name={icon} size={16} tone={tone === 'dim' ? 'faint' : 'text'} />
+          <Icon name={icon} size={16} tone={tone} />
         </View>
         <Body size={13} tone="dim" className="w-[128px]">
           {row.label}
@@ -60,11 +60,7 @@ export function InputsPanel({ line }: { line: LineMessage | null }) {
           inputRows(controller).map((row) => (
             <View key={row.label} className="min-w-[140px] flex-row items-start gap-2">
               <View className="pt-0.5">
-                <Icon
-                  name={marks[row.state].icon}
-                  size={16}
-                  tone={row.state === 'good' ? 'good' : row.state === 'bad' ? 'danger' : 'lamp'}
-                />
+                <Icon name={marks[row.state].icon} size={16} tone={marks[row.state].tone} />
               </View>
               <Body size={13} className="shrink">
                 <Body size={13} tone="dim">

@@ -1,4 +1,5 @@
-import type { IconName, Tone } from '@/components/ui';
+import type { ThemeColors } from '@/components/theme';
+import type { IconName } from '@/components/ui';
 import type { ControllerView, LineMessage, LinkHealthView } from '@/shared/contracts/link';
 import { formatAgo, formatTimeUncertainty } from '@/shared/lib/format-duration';
 import { formatFixed, formatSignificant, NARROW_SPACE } from '@/shared/lib/format-number';
@@ -94,7 +95,7 @@ export function healthRows({ health, controller }: Pick<LineMessage, 'health' | 
 export interface InputRow {
   label: string;
   words: string;
-  state: 'good' | 'look' | 'bad';
+  state: HealthRow['state'];
 }
 
 const row = (label: string, on: boolean, [onWords, offWords, off = 'look']: [string, string, InputRow['state']?]): InputRow => ({
@@ -110,12 +111,18 @@ export const inputRows = (controller: ControllerView): InputRow[] => [
   row('Arm key', controller.armKey, ['on: somebody is at the rig', 'off']),
   row('Position', controller.positionKnown, ['known', 'not known: home first']),
   row('Drivers', controller.driversOn, ['on', 'off: the table turns freely']),
+  {
+    label: 'Home flag',
+    words: controller.homeFlagCovered ? 'covered: clockwise of the edge' : 'free: counter-clockwise of the edge',
+    state: 'plain',
+  },
+  { label: 'Motion lease', words: controller.leaseLive ? 'live: it may move' : 'not live: nothing can move', state: 'plain' },
   row('Warning', !controller.warningDue, ['not due', 'comes for 10 s before the next move']),
 ];
 
-export const marks: Record<HealthRow['state'], { icon: IconName; tone: Tone }> = {
+export const marks: Record<HealthRow['state'], { icon: IconName; tone: keyof ThemeColors }> = {
   good: { icon: 'passed', tone: 'good' },
   look: { icon: 'note', tone: 'lamp' },
   bad: { icon: 'warning', tone: 'danger' },
-  plain: { icon: 'other', tone: 'dim' },
+  plain: { icon: 'other', tone: 'faint' },
 };

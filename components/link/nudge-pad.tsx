@@ -3,8 +3,8 @@ import { readDecimal } from '@/components/ui/read-decimal';
 import { Body, Button, Check, Field, Label, Panel, ProblemNotice } from '@/components/ui';
 import type { GuidedView, LineMessage } from '@/shared/contracts/link';
 import { formatDegrees } from '@/shared/lib/format-angle';
-import { pathObstacles } from '@/shared/protocol/motion-path';
 import type { RigMotion } from '@/shared/rig/document';
+import { keepOutEntered } from '@/shared/rig/travel';
 import type { FirstMove } from './first-move-draft';
 import type { GuidedMove } from './use-guided';
 
@@ -45,9 +45,7 @@ export function NudgePad({ motion, line, guided, move }: NudgePadProps) {
   const usable = steps !== null && Number.isInteger(steps) && steps >= 1 && steps <= longest;
   const angleDeg = line.controller?.angleDeg ?? null;
   const meets = (signed: number) =>
-    usable &&
-    angleDeg !== null &&
-    pathObstacles(motion, angleDeg, angleDeg + signed / motion.stepsPerDegree).some(({ code }) => code === 'keep-out');
+    usable && angleDeg !== null && keepOutEntered(motion, angleDeg, angleDeg + signed / motion.stepsPerDegree) !== null;
   const near = meets(steps ?? 0) || meets(-(steps ?? 0));
   const off = !usable || whyNot !== '' || mine === null;
   return (

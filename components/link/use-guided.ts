@@ -49,13 +49,18 @@ function useEndOnLeaving(rigId: string, guidedId: string | null): void {
   useEffect(() => {
     open.current = guidedId;
   }, [guidedId]);
-  useEffect(
-    () => () => {
+  useEffect(() => {
+    const end = () => {
       if (open.current === null) return;
       call(endGuided, { params: { labId, rigId }, body: { guidedId: open.current }, keepalive: true }).catch(() => undefined);
-    },
-    [labId, rigId],
-  );
+      open.current = null;
+    };
+    window.addEventListener('pagehide', end);
+    return () => {
+      window.removeEventListener('pagehide', end);
+      end();
+    };
+  }, [labId, rigId]);
 }
 
 /** A guided first move from this page: what may be ordered, and the orders. */
@@ -75,7 +80,7 @@ export function useGuided(rigId: string, { line, broken }: LiveLine): GuidedMove
   const teaching = useLabMutation(teachLimits);
   const params = { rigId };
   const orders = [nudging, homing, teaching];
-  const begin = [beginning, ...orders].find(({ error }) => error !== null)?.error ?? null;
+  const failure = [beginning, ...orders].find(({ error }) => error !== null)?.error ?? null;
   const forget = () => [beginning, ...orders].forEach((mutation) => mutation.reset());
   const give = (send: (body: { guidedId: string; tappedAt: string }) => void) => {
     if (guidedId === null) return;
@@ -87,7 +92,7 @@ export function useGuided(rigId: string, { line, broken }: LiveLine): GuidedMove
     other: guided !== null && guided.by.id !== userId ? guided.by.name : null,
     whyNot: broken ? 'The page has lost the server. Nothing is set in motion until it is back.' : (mine?.whyNot ?? ''),
     busy: [beginning, ending, ...orders].some(({ isPending }) => isPending),
-    problem: begin === null ? null : wordsOf(begin),
+    problem: failure === null ? null : wordsOf(failure),
     begin: () => {
       forget();
       beginning.mutate({ params, body: { cautionsRead: true } });

@@ -1,5 +1,5 @@
-import { pathObstacles } from '@/shared/protocol/motion-path';
 import type { RigMotion } from '@/shared/rig/document';
+import { keepOutEntered } from '@/shared/rig/travel';
 import type { Cancel, Clock } from '../interfaces/clock';
 import type { ControllerLimits, LinkEvent, TeachOutcome, TurntableLink } from '../interfaces/turntable-link';
 import { beginGuided, heardGuided, isUnderWay, withOrder, type GuidedState } from './guided-state';
@@ -205,7 +205,7 @@ export class GuidedMoves {
     session.orders += 1;
     const id = `${session.id}-${String(session.orders)}`;
     const steps = order.kind === 'nudge' ? order.steps : null;
-    session.state = withOrder(session.state, { id, kind: order.kind, steps });
+    session.state = withOrder(session.state, { id, sentAtUtcMs: this.parts.clock.utcMs(), kind: order.kind, steps });
     link.setLeaseRule(() => this.mayRenew(session));
     link.send(
       order.kind === 'home' ? { kind: 'home', id } : { kind: 'nudge', id, turnDeg: order.steps / session.rig.motion.stepsPerDegree },
@@ -352,11 +352,10 @@ function assertNudge(motion: RigMotion, link: TurntableLink, { steps, intoKeepOu
     );
   const angleDeg = link.controller()?.angleDeg ?? null;
   if (angleDeg === null || intoKeepOut) return;
-  const met = pathObstacles(motion, angleDeg, angleDeg + steps / motion.stepsPerDegree).find(({ code }) => code === 'keep-out');
-  if (met !== undefined)
+  const met = keepOutEntered(motion, angleDeg, angleDeg + steps / motion.stepsPerDegree);
+  if (met !== null)
     throw new GuidedRefused(
       'not-possible-now',
-      `This nudge would enter what is kept out: ${met.reason}. Say that you look at the gap, or turn the other way.`,
-      'intoKeepOut',
+      `This nudge would enter what is kept out of runs: ${met}. Say that you look at the gap, or turn the other way.`,
     );
 }

@@ -8,6 +8,7 @@ export type GuidedOrderState = 'sent' | 'accepted' | 'moving' | 'done' | 'cut sh
 
 export interface GuidedOrder {
   id: string;
+  sentAtUtcMs: number;
   kind: 'nudge' | 'home';
   /** Microsteps of a nudge, positive counter-clockwise; null for home. */
   steps: number | null;
@@ -37,7 +38,7 @@ export const beginGuided = (): GuidedState => ({ order: null, count: { number: 1
 export const isUnderWay = ({ order }: GuidedState): boolean =>
   order !== null && (order.state === 'sent' || order.state === 'accepted' || order.state === 'moving');
 
-export const withOrder = (state: GuidedState, order: Pick<GuidedOrder, 'id' | 'kind' | 'steps'>): GuidedState => ({
+export const withOrder = (state: GuidedState, order: Pick<GuidedOrder, 'id' | 'sentAtUtcMs' | 'kind' | 'steps'>): GuidedState => ({
   ...state,
   order: { ...order, state: 'sent', detail: '' },
   fromDeg: null,

@@ -1,6 +1,7 @@
 import type { GuidedView, LineMessage, LinkHealthView } from '@/shared/contracts/link';
 import type { MotionLimits } from '@/shared/rig/travel';
 import { longestNudgeSteps, type GuidedSession, type Halt } from '../engine/guided-moves';
+import type { GuidedOrder } from '../engine/guided-state';
 import type { RigStation } from '../interfaces/rig-stations';
 import type { ControllerLimits, LinkHealth } from '../interfaces/turntable-link';
 import { isoOf, isoOrNull } from './maker';
@@ -25,6 +26,8 @@ export const limitsViewOf = (limits: ControllerLimits): MotionLimits => ({
   homeSpeed_deg_s: limits.homeSpeedDegS,
 });
 
+const orderViewOf = ({ sentAtUtcMs, ...order }: GuidedOrder) => ({ ...order, at: isoOf(sentAtUtcMs) });
+
 export function guidedViewOf(services: Services, session: GuidedSession): GuidedView {
   const { guided, stations } = services;
   const { id, rig, by, sinceUtcMs, state } = session;
@@ -36,7 +39,7 @@ export function guidedViewOf(services: Services, session: GuidedSession): Guided
     since: isoOf(sinceUtcMs),
     present: guided.isPresent(rig.rigId),
     whyNot: guided.whyNot(rig.rigId),
-    order,
+    order: order === null ? null : orderViewOf(order),
     count,
     edges,
     longestNudgeSteps: link === null ? 0 : longestNudgeSteps(rig.motion, link),

@@ -25,6 +25,10 @@ export interface ControllerState {
   supplyPresent: boolean;
   armKey: boolean;
   driversOn: boolean;
+  /** The home flag covers its sensor: the table stands clockwise of the edge. */
+  homeFlagCovered: boolean;
+  /** The motion lease is live. */
+  leaseLive: boolean;
   /** A warning comes before the next motion: the controller has just started, or the interlock was opened since the last one. */
   warningDue: boolean;
 }

@@ -92,6 +92,8 @@ export class ControllerReport {
       supplyPresent: this.has(FLAG.supplyPresent),
       armKey: this.has(FLAG.armKey),
       driversOn: this.has(FLAG.driversOn),
+      homeFlagCovered: this.has(FLAG.homeFlag),
+      leaseLive: this.has(FLAG.leaseLive),
       warningDue: this.has(FLAG.warningDue),
     };
   }

@@ -37,6 +37,8 @@ export const controllerViewSchema = z.strictObject({
   supplyPresent: z.boolean(),
   armKey: z.boolean(),
   driversOn: z.boolean(),
+  homeFlagCovered: z.boolean(),
+  leaseLive: z.boolean(),
   warningDue: z.boolean(),
 });
 export type ControllerView = z.infer<typeof controllerViewSchema>;
@@ -54,6 +56,7 @@ export const guidedViewSchema = z.strictObject({
   order: z
     .strictObject({
       id: z.string(),
+      at: instantSchema,
       kind: z.enum(['nudge', 'home']),
       steps: z.number().int().nullable(),
       state: z.enum(['sent', 'accepted', 'moving', 'done', 'cut short', 'refused']),

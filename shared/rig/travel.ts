@@ -1,4 +1,4 @@
-import { degrees } from '../protocol/motion-path';
+import { degrees, pathObstacles } from '../protocol/motion-path';
 import type { RigDocument, RigMotion } from './document';
 
 /** Travel limits that a person taught by hand: the two ends as found, and what stays between an end and its limit. Pure. */
@@ -43,13 +43,16 @@ export function travelFindings(document: RigDocument, taught: TaughtTravel): Tra
   const refused = refusalOf(document, taught);
   if (refused !== null) return [refused];
   const { minDeg, maxDeg } = limitsOfTravel(taught);
-  return Object.entries(document.stations)
-    .filter(([, { value }]) => value < minDeg || value > maxDeg)
-    .map(([name, { value }]) => ({
+  const outside = Object.entries(document.stations).filter(([, { value }]) => value < minDeg || value > maxDeg);
+  if (outside.length === 0) return [];
+  const names = outside.map(([name, { value }]) => `${name} (${degrees(value)})`).join(', ');
+  return [
+    {
       state: 'note',
-      field: value < minDeg ? 'leastDeg' : 'greatestDeg',
-      message: `The station ${name} at ${degrees(value)} lies outside ${degrees(minDeg)} to ${degrees(maxDeg)}: no run could go there.`,
-    }));
+      field: 'marginDeg',
+      message: `Outside ${degrees(minDeg)} to ${degrees(maxDeg)}, so that no run could go there: ${names}.`,
+    },
+  ];
 }
 
 function refusalOf({ motion }: RigDocument, taught: TaughtTravel): TravelFinding | null {
@@ -94,6 +97,16 @@ function covers([from, to]: readonly [number, number], inner: readonly [number, 
   return inner[0] >= from + shift - 1e-9 && inner[1] <= to + shift + 1e-9;
 }
 
+/**
+ * What a small turn would enter of the arcs that are kept out of runs, in words; null where it enters none. Whoever stands in an arc may
+ * always turn out of it.
+ */
+export function keepOutEntered(motion: RigMotion, fromDeg: number, toDeg: number): string | null {
+  const inArc = (deg: number) => pathObstacles(motion, deg, deg).some(({ code }) => code === 'keep-out');
+  const met = pathObstacles(motion, fromDeg, toDeg).find(({ code }) => code === 'keep-out');
+  return met === undefined || (inArc(fromDeg) && !inArc(toDeg)) ? null : met.reason;
+}
+
 /** Limits, caps and home speed in the rig's units. */
 export interface MotionLimits {
   minDeg: number;
@@ -116,9 +129,9 @@ export interface LimitRow {
 const rowsOf: readonly { name: keyof MotionLimits; label: string; unit: string; wider: 'less' | 'more' }[] = [
   { name: 'minDeg', label: 'least angle', unit: 'deg', wider: 'less' },
   { name: 'maxDeg', label: 'greatest angle', unit: 'deg', wider: 'more' },
-  { name: 'maxSpeed_deg_s', label: 'greatest speed', unit: 'deg/s', wider: 'more' },
-  { name: 'maxAcceleration_deg_s2', label: 'greatest acceleration', unit: 'deg/s²', wider: 'more' },
-  { name: 'homeSpeed_deg_s', label: 'home speed', unit: 'deg/s', wider: 'more' },
+  { name: 'maxSpeed_deg_s', label: 'greatest speed', unit: '°/s', wider: 'more' },
+  { name: 'maxAcceleration_deg_s2', label: 'greatest acceleration', unit: '°/s²', wider: 'more' },
+  { name: 'homeSpeed_deg_s', label: 'home speed', unit: '°/s', wider: 'more' },
 ];
 
 /** What the controller reports against what the rig document says; `tolerance` is the rounding of one microstep, in the unit of the row. */

@@ -33,7 +33,7 @@ const rig = {
 };
 const controller = {
   ...{ bootId: '0000AB01', firmware: 'evenfall-0.1', positionKnown: true, angleDeg: 0, moving: false, interlockClosed: true },
-  ...{ supplyPresent: true, armKey: true, driversOn: true, warningDue: false },
+  ...{ supplyPresent: true, armKey: true, driversOn: true, homeFlagCovered: false, leaseLive: false, warningDue: false },
 };
 const guided: GuidedView = {
   ...{ id: 'g-1', by: { id: 'u1', name: 'Ada Thornfield' }, since: at, present: true, whyNot: '', order: null },
@@ -57,7 +57,7 @@ const line = (change: object = {}): LineMessage =>
     ...change,
   }) as LineMessage;
 const done = (steps: number, count = steps) => ({
-  guided: { ...guided, order: { id: 'o', kind: 'nudge', steps, state: 'done', detail: '' }, count: { number: 1, steps: count } },
+  guided: { ...guided, order: { id: 'o', at, kind: 'nudge', steps, state: 'done', detail: '' }, count: { number: 1, steps: count } },
 });
 
 function Page() {
@@ -177,7 +177,7 @@ test('travel is taught at both ends, with the margin, the stations out of reach 
   standAt(62.5);
   await press('this-is-greatest');
   expect(screen.getByTestId('taught-limits').textContent).toBe('−58.00° to 60.50°');
-  expect(screen.getByText(/The station clear at 90° lies outside/)).toBeTruthy();
+  expect(screen.getByText(/so that no run could go there: clear \(90°\)/)).toBeTruthy();
   type('margin-deg', '-1');
   expect(screen.queryByTestId('revise-travel')).toBeNull();
   expect(screen.getByText('The margin is a number of degrees, 0 or more.')).toBeTruthy();

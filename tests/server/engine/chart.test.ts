@@ -18,6 +18,8 @@ const controller: ControllerState = {
   supplyPresent: true,
   armKey: true,
   driversOn: true,
+  homeFlagCovered: false,
+  leaseLive: false,
   warningDue: false,
 };
 const at = (seconds: number) => ({ utcMs: startUtcMs + 1000 * seconds, uS: 0.0002 });

@@ -12,6 +12,8 @@ const controller: ControllerState = {
   supplyPresent: true,
   armKey: true,
   driversOn: true,
+  homeFlagCovered: false,
+  leaseLive: false,
   warningDue: false,
 };
 const ready = (more: Partial<ControllerState> = {}): LinkEvent => ({

@@ -73,6 +73,8 @@ export class FakeLink implements TurntableLink {
       supplyPresent: this.supplyPresent,
       armKey: true,
       driversOn: true,
+      homeFlagCovered: false,
+      leaseLive: false,
       warningDue: this.warningDue,
     };
   }

@@ -1,8 +1,8 @@
 import * as fc from 'fast-check';
 import { pathObstacles } from '@/shared/protocol/motion-path';
 import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
-import { rigDocumentSchema } from '@/shared/rig/document';
-import { arcOutside, compareLimits, limitsOfTravel, travelFindings, withTravel } from '@/shared/rig/travel';
+import { rigDocumentSchema, type RigMotion } from '@/shared/rig/document';
+import { arcOutside, compareLimits, keepOutEntered, limitsOfTravel, travelFindings, withTravel } from '@/shared/rig/travel';
 
 describe('travel taught by hand', () => {
   test('of the close rig: ends at 28° and 152° with 2° of margin give its limits, and the rest is its keep-out arc', () => {
@@ -61,13 +61,23 @@ describe('travel taught by hand', () => {
 
   test('names the stations that would be out of reach', () => {
     const findings = travelFindings(demoRigWide, { leastDeg: -60, greatestDeg: 60, marginDeg: 2 });
-    expect(findings.every(({ state }) => state === 'note')).toBe(true);
-    expect(findings.map(({ message }) => message.split(' at ')[0])).toEqual([
-      'The station clear',
-      'The station across',
-      'The station nearBack',
-      'The station farBack',
+    expect(findings).toEqual([
+      {
+        state: 'note',
+        field: 'marginDeg',
+        message: expect.stringContaining('clear (90°), across (90°), nearBack (−159.82°), farBack (159.82°)'),
+      },
     ]);
+    expect(travelFindings(demoRigWide, { leastDeg: -170, greatestDeg: 170, marginDeg: 2 })).toEqual([]);
+  });
+
+  test('a small turn enters an arc from outside or goes on inside it; out of it is always free', () => {
+    const motion = demoRigNarrow.motion as RigMotion;
+    expect(keepOutEntered(motion, 31, 30)).toBeNull();
+    expect(keepOutEntered(motion, 30, 28)).toContain('the keep-out arc −29° to 29°');
+    expect(keepOutEntered(motion, 28, 27)).toContain('−29° to 29°');
+    expect(keepOutEntered(motion, 27, 30)).toBeNull();
+    expect(keepOutEntered(motion, 150, 152)).toContain('its image 151° to 209°');
   });
 });
 
