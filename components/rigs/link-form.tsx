@@ -1,7 +1,9 @@
 import { useState } from 'react';
 import { View } from 'react-native';
 import { Field, Label, Tabs } from '@/components/ui';
+import type { SerialPortView } from '@/shared/contracts/link';
 import type { LinkSettings } from '@/shared/contracts/rigs';
+import { PortList } from './port-list';
 import { NetworkFields, type NetworkLink } from './network-fields';
 
 interface LinkFormProps {
@@ -33,6 +35,11 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
     setBaud(next.baud);
     onChange({ kind: 'serial', path: next.path.trim(), baudRate: Number(next.baud) || usualBaud });
   };
+  const choosePort = (port: SerialPortView) => {
+    const chosen = port.stablePath ?? port.path;
+    setPath(chosen);
+    onChange({ kind: 'serial', path: chosen, baudRate: Number(baud) || usualBaud, ...(port.usb === null ? {} : { usb: port.usb }) });
+  };
   const overNetwork = (next: NetworkLink) => {
     setNetwork(next);
     onChange(next);
@@ -58,6 +65,7 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
       {link.kind === 'tcp' && <NetworkFields link={network} onChange={overNetwork} errors={errors} />}
       {link.kind === 'serial' && (
         <>
+          <PortList chosen={path} onChoose={choosePort} />
           <Field
             label="Path of the line"
             value={path}

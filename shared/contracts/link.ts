@@ -1,7 +1,7 @@
 import * as z from 'zod';
 import { idSchema, instantSchema } from './common';
 import { defineRoute } from './route';
-import { armViewSchema, linkSettingsSchema } from './rigs';
+import { armViewSchema, linkSettingsSchema, usbIdentitySchema } from './rigs';
 
 /** The line of a rig as it is now, and the small moves of a person who stands at the rig. */
 
@@ -121,6 +121,26 @@ export const liveLine = defineRoute({
   status: 200,
   produces: 'text/event-stream',
   problems: ['not-found', 'too-many-requests'],
+});
+export const serialPortSchema = z.strictObject({
+  path: z.string(),
+  /** The same port under a name that does not change when plugs are changed; null where there is none. */
+  stablePath: z.string().nullable(),
+  label: z.string().nullable(),
+  usb: usbIdentitySchema.nullable(),
+  /** Name of the rig whose line goes over this port; null while none does. */
+  usedBy: z.string().nullable(),
+});
+export type SerialPortView = z.infer<typeof serialPortSchema>;
+export const listSerialPorts = defineRoute({
+  name: 'listSerialPorts',
+  summary: 'Serial ports of the server, to choose from',
+  method: 'GET',
+  path: '/labs/:labId/serial-ports',
+  access: 'rig.edit',
+  status: 200,
+  response: z.strictObject({ items: z.array(serialPortSchema) }),
+  problems: ['not-found'],
 });
 export const beginGuided = defineRoute({
   name: 'beginGuided',

@@ -50,6 +50,12 @@ function places(): Place[] {
     { name: 'rig', path: rig, arrives: 'rig-screen' },
     { name: 'rig-revisions', path: `${rig}/revisions`, arrives: '' },
     { name: 'link', path: `${rig}/link`, arrives: 'link-screen', first: (hand) => hand.tapsOn('Serial line', 'radio') },
+    {
+      name: 'first-move',
+      path: `${rig}/first-move`,
+      arrives: 'first-move-screen',
+      first: async (hand) => void (await hand.reads('conditions')),
+    },
     { name: 'start', path: `${rig}/start`, arrives: 'start-screen', first: async (hand) => void (await hand.reads('start-checks')) },
     { name: 'protocols', path: '/protocols', arrives: 'protocols-screen' },
     { name: 'new-protocol', path: '/protocols/new', arrives: 'new-protocol-screen' },

@@ -3,7 +3,7 @@ import { homeSpeedDegS } from '@/shared/protocol/durations';
 import type { RigMotion } from '@/shared/rig/document';
 import { GuidedRefused, type MoveRequest, type GuidedRig } from '@/server/engine/guided-moves';
 import type { ControllerLimits } from '@/server/interfaces/turntable-link';
-import { findRig, type RigRecord } from '@/server/store/rigs';
+import { findRig, listRigs, type RigRecord } from '@/server/store/rigs';
 import { auditLater, audited } from '../audited';
 import { assertFreshTap } from '../begin-run';
 import { guidedViewOf, limitsViewOf } from '../line-view';
@@ -77,6 +77,12 @@ const guidedRoutes = [
     }
     services.lines.open(res, { labId, rigId: params.rigId, me });
     return undefined;
+  }),
+
+  mount(contracts.listSerialPorts, async ({ membership, services }) => {
+    const [ports, rigs] = await Promise.all([services.stations.listPorts(), listRigs(services.database.db, membership.labId)]);
+    const userOf = (names: (string | null)[]) => rigs.find(({ link }) => link.kind === 'serial' && names.includes(link.path))?.name ?? null;
+    return { items: ports.map((port) => ({ ...port, usedBy: userOf([port.path, port.stablePath]) })) };
   }),
 
   mount(contracts.beginGuided, async (context) => {

@@ -90,3 +90,25 @@ test('an operator is told who may change the link', async () => {
   expect(screen.queryByTestId('save-link')).toBeNull();
   expect(screen.getByText(/Only a keeper or an owner may change a rig\./)).toBeTruthy();
 });
+
+test('a port of the server is chosen with a tap, under the name that stays and with the device that it is', async () => {
+  const usb = { vendorId: '2341', productId: '0043', serialNumber: '75330' };
+  const stablePath = '/dev/serial/by-id/usb-board-75330';
+  const lab = await open('keeper');
+  const ports = [{ path: '/dev/ttyACM0', stablePath, label: 'A board', usb, usedBy: null }];
+  lab.on('GET /labs/lab-1/serial-ports', () => ({ body: { items: ports } }));
+  lab.on('POST /labs/lab-1/rigs/rig-1/link/try', () => ({ body: { ok: true, detail: 'A controller answers.', firmware: 'evenfall-0.1' } }));
+  fireEvent.click(screen.getByText('Serial line'));
+  await settled();
+  expect(screen.getByTestId('port-list').textContent).toContain('A board · USB 75330 · free');
+  fireEvent.click(screen.getByTestId('port-/dev/ttyACM0'));
+  expect(screen.getByTestId('link-path')).toHaveProperty('value', stablePath);
+  fireEvent.click(screen.getByTestId('try-link'));
+  await screen.findByText(/A controller answers\./);
+  expect(lab.requests('POST /labs/lab-1/rigs/rig-1/link/try')[0]?.body).toEqual({
+    kind: 'serial',
+    path: stablePath,
+    baudRate: 115_200,
+    usb,
+  });
+});

@@ -88,6 +88,7 @@ export const rows: Readonly<Record<string, Row>> = {
   addMassSet: { params: rig, body: () => ({ label: `Set ${randomUUID()}`, sources: demoRigWide.sources }), allowed: 201 },
   startChecks: { params: rig, query: ({ protocolId }) => ({ protocolId, revision: '1' }), allowed: 200 },
   liveLine: { params: rig, allowed: 200 },
+  listSerialPorts: { params: lab, allowed: 200 },
   beginGuided: { params: rig, body: () => ({ cautionsRead: true }), allowed: 409 },
   endGuided: { params: rig, body: () => ({ guidedId: nobody }), allowed: 204 },
   stayGuided: { params: rig, body: () => ({ guidedId: nobody, beat: 0 }), allowed: 409 },
