@@ -179,6 +179,8 @@ export class Conversation {
       this.say(
         `q ${this.pick([0, this.epoch])} ${this.pick(['00000000', this.session])} ${this.pick([0, this.number, (this.number + 1) % 65_536])} ${kind}`,
       );
+      // Once more when both have come to rest: 400 microsteps/s at 50/s² take 8 s.
+      this.ms += 9000;
       if (this.upTo(1) === 0) this.say(`q 0 00000000 0 ${kind}`);
     }
     this.wait(restMs, kind === 'hello' || kind === 'busy');

@@ -74,7 +74,7 @@ test(`${LINES} seeded lines between right and wrong are read as the codec reads 
   expect(differing).toEqual([]);
   const kinds = new Set(lines.map((line) => decodeLine(line).kind));
   expect([...kinds].sort()).toEqual(['garbage', 'request', 'unusable']);
-});
+}, 300_000);
 
 test('no line with a flipped bit moves anything, though the lease is live and the rig is homed', () => {
   const script = new FirmwareScript({ place: -20 }).wait(100).hello().order('renew').order('home 0000AAAA').renewing(20_000).order('renew');
