@@ -154,11 +154,10 @@ uint8_t sendSealed(Writer& writer, const char* text) {
 }
 
 void refuse(const Request& request, Tick received, Code code, uint32_t detail) {
-  char text[MAX_LINE];
-  Writer writer(text);
+  Writer writer(scratch);
   head(writer, request, received);
   no(writer, code, detail);
-  sendSealed(writer, text);
+  sendSealed(writer, scratch);
 }
 
 void sendStored() { hal::send(session::storedReply(), session::storedLength()); }
@@ -175,8 +174,7 @@ void answerSession(const Request& request, const Line& line, uint8_t length) {
       break;
   }
   code = request.unusable != Code::none ? request.unusable : carryOut(request, line.received, detail);
-  char text[MAX_LINE];
-  Writer writer(text);
+  Writer writer(scratch);
   head(writer, request, line.received);
   if (code != Code::none)
     no(writer, code, detail);
@@ -184,7 +182,7 @@ void answerSession(const Request& request, const Line& line, uint8_t length) {
     lim(writer);
   else
     ok(writer);
-  session::keep(request, line.text, length, text, sendSealed(writer, text));
+  session::keep(request, line.text, length, scratch, sendSealed(writer, scratch));
   if (request.order == Order::events && code == Code::none) events::sendAgain(request.from);
 }
 
@@ -198,11 +196,10 @@ void obeyStop(const Request& request, const Line& line, uint8_t length) {
     motion::brake(Cause::hold, false);
   else
     motion::stop(request.free);
-  char text[MAX_LINE];
-  Writer writer(text);
+  Writer writer(scratch);
   head(writer, request, line.received);
   ok(writer);
-  session::keep(request, line.text, length, text, sendSealed(writer, text));
+  session::keep(request, line.text, length, scratch, sendSealed(writer, scratch));
 }
 
 void hello(const Request& request, Tick received) {
@@ -210,19 +207,17 @@ void hello(const Request& request, Tick received) {
   const uint32_t opened = session::open(request.epoch);
   if (opened == 0) return refuse(request, received, Code::epoch, memory::highestEpoch());
   motion::newSession();
-  char text[MAX_LINE];
-  Writer writer(text);
+  Writer writer(scratch);
   head(writer, request, received);
   hi(writer, opened);
-  sendSealed(writer, text);
+  sendSealed(writer, scratch);
 }
 
 void ident(const Request& request, Tick received) {
-  char text[MAX_LINE];
-  Writer writer(text);
+  Writer writer(scratch);
   head(writer, request, received);
   hi(writer, 0);
-  sendSealed(writer, text);
+  sendSealed(writer, scratch);
 }
 
 void obey(const Request& request, const Line& line) {

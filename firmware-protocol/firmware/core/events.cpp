@@ -81,10 +81,9 @@ void compose(Writer& writer, uint32_t number) {
 }
 
 void sendOne(uint32_t number) {
-  char line[MAX_LINE];
-  Writer writer(line);
+  Writer writer(scratch);
   compose(writer, number);
-  hal::send(line, writer.seal());
+  hal::send(scratch, writer.seal());
 }
 
 }  // namespace

@@ -2,6 +2,8 @@
 
 namespace core {
 
+char scratch[MAX_LINE];
+
 namespace {
 const char NONE[] FLASH = "none";
 const uint32_t POWERS[] FLASH = {1000000000, 100000000, 10000000, 1000000, 100000, 10000, 1000, 100, 10, 1};

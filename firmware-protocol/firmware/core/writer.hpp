@@ -6,6 +6,9 @@
 
 namespace core {
 
+/** The line that is being composed, one at a time; not on the stack, which is short on the board. */
+extern char scratch[MAX_LINE];
+
 class Writer {
  public:
   explicit Writer(char* buffer) : start_(buffer), at_(buffer), crc_(CRC_START) {}
