@@ -47,6 +47,11 @@ export function NudgePad({ motion, line, guided, move }: NudgePadProps) {
   const meets = (signed: number) =>
     usable && angleDeg !== null && keepOutEntered(motion, angleDeg, angleDeg + signed / motion.stepsPerDegree) !== null;
   const near = meets(steps ?? 0) || meets(-(steps ?? 0));
+  const turn = (signed: number) => {
+    guided.nudge(signed, near && draft.intoKeepOut);
+    // What was said of one gap does not hold for the next.
+    if (!near && draft.intoKeepOut) set({ intoKeepOut: false });
+  };
   const off = !usable || whyNot !== '' || mine === null;
   return (
     <Panel className="gap-3" testID="nudge-pad">
@@ -75,7 +80,7 @@ export function NudgePad({ motion, line, guided, move }: NudgePadProps) {
           accessibilityLabel="Nudge counter-clockwise"
           disabled={off}
           busy={busy}
-          onPress={() => guided.nudge(steps ?? 0, near && draft.intoKeepOut)}
+          onPress={() => turn(steps ?? 0)}
           testID="nudge-ccw"
         />
         <Button
@@ -85,7 +90,7 @@ export function NudgePad({ motion, line, guided, move }: NudgePadProps) {
           accessibilityLabel="Nudge clockwise"
           disabled={off}
           busy={busy}
-          onPress={() => guided.nudge(-(steps ?? 0), near && draft.intoKeepOut)}
+          onPress={() => turn(-(steps ?? 0))}
           testID="nudge-cw"
         />
       </View>
