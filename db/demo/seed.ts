@@ -49,6 +49,8 @@ export interface SeedParts {
   nowUtcMs: number;
   hashPassword(password: string): Promise<string>;
   sha256: Sha256;
+  /** What the demo rig's line leads to; default: the emulated controller board. */
+  link?: 'board' | 'simulated';
 }
 
 /**
@@ -66,7 +68,7 @@ export async function seedDemo(connection: Connection, parts: SeedParts): Promis
       .returning({ id: schema.labs.id });
     if (made.length === 0) return false;
     await seedPeople(tx, parts.nowUtcMs, passwordHash);
-    await seedRig(tx, parts.nowUtcMs);
+    await seedRig(tx, parts);
     await seedProtocols(tx, parts);
     const entry = { at: new Date(parts.nowUtcMs).toISOString(), kind: 'lab.made', data: { demo: true, who: { id: null, name: 'demo' } } };
     await tx.insert(schema.audit).values({ labId: demoIds.lab, ...appendEvent(emptyChain, entry, parts.sha256) });
@@ -87,7 +89,7 @@ async function seedPeople(tx: Handle, nowUtcMs: number, passwordHash: string): P
   await tx.insert(schema.memberships).values(demoPeople.map(({ id, role }) => ({ labId: demoIds.lab, userId: id, role, since: nowUtcMs })));
 }
 
-async function seedRig(tx: Handle, nowUtcMs: number): Promise<void> {
+async function seedRig(tx: Handle, { nowUtcMs, link = 'board' }: SeedParts): Promise<void> {
   const keeper = withRole('keeper');
   const own = { labId: demoIds.lab, rigId: demoIds.rig };
   await tx.insert(schema.rigs).values({ labId: demoIds.lab, id: demoIds.rig, name: demoRigName, revision: 1, createdAt: nowUtcMs });
@@ -101,7 +103,7 @@ async function seedRig(tx: Handle, nowUtcMs: number): Promise<void> {
     madeById: keeper.id,
     madeBy: keeper.name,
   });
-  await tx.insert(schema.rigLinks).values({ ...own, settings: { kind: 'simulated' }, changedAt: nowUtcMs, changedBy: keeper.name });
+  await tx.insert(schema.rigLinks).values({ ...own, settings: { kind: link }, changedAt: nowUtcMs, changedBy: keeper.name });
   await tx.insert(schema.massSets).values([
     { ...own, id: demoIds.massSet, label: 'Lead spheres, 1.6 kg', sources: demoRigWide.sources, createdAt: nowUtcMs },
     // Mass sets are offered oldest first: the loaded one before the control.

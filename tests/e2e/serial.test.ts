@@ -1,5 +1,3 @@
-import { randomUUID } from 'node:crypto';
-import { demoIds } from '@/db/demo/seed';
 import type { ChainedEvent } from '@/shared/archive/run-records';
 import type { StepRowView } from '@/shared/contracts/runs';
 import type { ProtocolDocument } from '@/shared/protocol/document';
@@ -46,17 +44,7 @@ afterAll(async () => {
   await controller.dispose();
 }, 30_000);
 
-/** A request of the page itself, with its session. */
-async function ask(method: 'GET' | 'POST', path: string, { body, etag }: { body?: object; etag?: string } = {}) {
-  const headers = { 'Sec-Fetch-Site': 'same-origin', 'Idempotency-Key': randomUUID(), ...(etag === undefined ? {} : { 'If-Match': etag }) };
-  const response = await hand.context.request.fetch(`/api/labs/${demoIds.lab}${path}`, {
-    method,
-    headers,
-    ...(body === undefined ? {} : { data: body }),
-  });
-  if (!response.ok()) throw new Error(`${method} ${path}: ${await response.text()}`);
-  return { body: await response.json(), etag: response.headers()['etag'] ?? '' };
-}
+const ask: Hand['asks'] = (...request) => hand.asks(...request);
 
 test('a run started in the browser drives the controller over a serial line, which is lost and found again', async () => {
   const rig = await ask('POST', '/rigs', {

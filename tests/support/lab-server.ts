@@ -111,7 +111,12 @@ export class LabServer {
 
   static async start(database: TestDatabase, options: LabServerOptions & { world?: World } = {}): Promise<LabServer> {
     const world = options.world ?? new World();
-    await seedDemo(database.connection, { nowUtcMs: world.clock.utcMs(), hashPassword: async () => 'no password in this test', sha256 });
+    await seedDemo(database.connection, {
+      nowUtcMs: world.clock.utcMs(),
+      hashPassword: async () => 'no password in this test',
+      sha256,
+      link: 'simulated',
+    });
     const built = buildServer({
       database: database.connection,
       clock: world.clock,

@@ -12,7 +12,7 @@ const passwordHash = 'nobody signs in here';
 
 /** Makes the demo lab with its rig. */
 export async function seedLab({ connection }: BenchDatabase): Promise<void> {
-  await seedDemo(connection, { nowUtcMs: clock.utcMs(), hashPassword: async () => passwordHash, sha256: sha256Hex });
+  await seedDemo(connection, { nowUtcMs: clock.utcMs(), hashPassword: async () => passwordHash, sha256: sha256Hex, link: 'simulated' });
 }
 
 /** Makes so many members of the lab, who are no demo accounts. Returns the cookie of a session of each. */

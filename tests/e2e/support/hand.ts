@@ -1,3 +1,5 @@
+import { randomUUID } from 'node:crypto';
+import { demoIds } from '@/db/demo/seed';
 import type { Locator } from 'playwright-core';
 import { picture, shoot, type Browser } from '../../support/browser';
 
@@ -35,6 +37,22 @@ export class Hand {
   async goes(path: string, arrives: string): Promise<void> {
     await this.page.goto(path);
     await this.at(arrives).waitFor();
+  }
+
+  /** A request to the demo lab from the page itself, with its session. */
+  async asks(method: 'GET' | 'POST', path: string, { body, etag }: { body?: object; etag?: string } = {}) {
+    const headers = {
+      'Sec-Fetch-Site': 'same-origin',
+      'Idempotency-Key': randomUUID(),
+      ...(etag === undefined ? {} : { 'If-Match': etag }),
+    };
+    const response = await this.context.request.fetch(`/api/labs/${demoIds.lab}${path}`, {
+      method,
+      headers,
+      ...(body === undefined ? {} : { data: body }),
+    });
+    if (!response.ok()) throw new Error(`${method} ${path}: ${await response.text()}`);
+    return { body: await response.json(), etag: response.headers()['etag'] ?? '' };
   }
 
   async taps(target: string | Locator): Promise<void> {

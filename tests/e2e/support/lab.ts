@@ -46,7 +46,7 @@ export class Lab {
     const database = await freshDatabase();
     // Cookies carry absolute dates, so the lab's evening begins at the present of the browser's machine.
     const world = new World(Date.now());
-    await seedDemo(database.connection, { nowUtcMs: world.clock.utcMs(), hashPassword, sha256: sha256Hex });
+    await seedDemo(database.connection, { nowUtcMs: world.clock.utcMs(), hashPassword, sha256: sha256Hex, link: 'simulated' });
     const mailbox = await startDemoMailbox({ folder: mkdtempSync(join(tmpdir(), 'evenfall-mail-')), clock: world.clock });
     const mail = createSmtpMail({ url: mailbox.url, from: 'Evenfall <evenfall@quillfen.example>' });
     const server = await LabServer.start(database, { world, config: { webDir }, overrides: { mail } });

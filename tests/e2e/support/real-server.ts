@@ -16,10 +16,12 @@ export class RealServer {
     private readonly database: TestDatabase,
   ) {}
 
-  static async start(): Promise<RealServer> {
+  /** `link`: what the demo rig's line leads to. */
+  static async start(link: 'simulated' | 'board' = 'simulated'): Promise<RealServer> {
     const database = await freshDatabase();
     const clock = new RealClock();
-    await seedDemo(database.connection, { nowUtcMs: clock.utcMs(), hashPassword: async () => 'no password in this test', sha256 });
+    const hashPassword = async () => 'no password in this test';
+    await seedDemo(database.connection, { nowUtcMs: clock.utcMs(), hashPassword, sha256, link });
     const config = testConfig(database, { webDir: join(__dirname, '../../../dist') });
     const built = buildServer({ database: database.connection, clock, config, overrides: { tasks: heavyTasks, ticks: false } });
     await built.start();
