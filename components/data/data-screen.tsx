@@ -25,12 +25,13 @@ function bandsOf(rows: readonly StepRowView[]): StepBand[] {
 
 /** The deflection of a run against the steps that moved the masses, as close as one likes. */
 export function DataScreen() {
-  const { runId } = useLocalSearchParams<{ runId: string }>();
+  const { runId, channel: asked } = useLocalSearchParams<{ runId: string; channel?: string }>();
   const may = useMay('data.import');
   const whole = useLabQuery(readSamples, { params: { runId }, query: { points } });
   const channels = (whole.data?.data.channels ?? []).filter((channel) => channel.role === 'deflection');
   const [chosen, setChosen] = useState<string | null>(null);
-  const channelId = chosen ?? whole.data?.data.channel?.id ?? null;
+  const wanted = chosen ?? asked ?? null;
+  const channelId = channels.find(({ id }) => id === wanted)?.id ?? whole.data?.data.channel?.id ?? null;
   const toImport = () => router.push(`/runs/${runId}/import` as Href);
   return (
     <Screen title="Deflection data" back={{ href: `/runs/${runId}` as Href, label: 'the run' }} testID="data-screen">

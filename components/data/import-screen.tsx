@@ -159,7 +159,7 @@ function Stored({
   runId: string;
   stored: number;
   known: number;
-  channel: string;
+  channel: { id: string; name: string };
   onAnother: () => void;
 }) {
   return (
@@ -167,12 +167,12 @@ function Stored({
       <View role="status" className="flex-row items-center gap-2">
         <Icon name="passed" tone="good" />
         <Body strong className="shrink">
-          {formatFixed(stored, { decimals: 0 })} samples stored in {channel}
+          {formatFixed(stored, { decimals: 0 })} samples stored in {channel.name}
           {known > 0 ? `; ${formatFixed(known, { decimals: 0 })} were there already` : ''}.
         </Body>
       </View>
       <View className="flex-row flex-wrap gap-2">
-        <TextLink href={`/runs/${runId}/data`} label="See it against the steps" />
+        <TextLink href={`/runs/${runId}/data?channel=${channel.id}`} label="See it against the steps" />
         <TextLink href={`/runs/${runId}/evaluation`} label="Evaluate" />
         <Button kind="quiet" label="Import another file" onPress={onAnother} />
       </View>

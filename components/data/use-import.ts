@@ -40,7 +40,7 @@ export function useImport(runId: string, channelName: string) {
   const [state, dispatch] = useReducer(importReducer, channelName, noImport);
   const { step, failure, attempt, forget } = useAttempt();
   const [head, setHead] = useState('');
-  const [stored, setStored] = useState<{ stored: number; known: number; channel: string } | null>(null);
+  const [stored, setStored] = useState<{ stored: number; known: number; channel: { id: string; name: string } } | null>(null);
 
   const mapping = state.draft === null ? null : completeMapping(state.draft);
   const importId = state.imported?.id ?? '';
@@ -75,7 +75,7 @@ export function useImport(runId: string, channelName: string) {
           body: { mapping: mapping.mapping, channelName: state.channelName },
         });
         remember(labId, state.imported?.preview?.columns.map((column) => column.name) ?? [], mapping.mapping);
-        setStored({ stored: data.stored, known: data.known, channel: data.channel.name });
+        setStored({ stored: data.stored, known: data.known, channel: data.channel });
         await queries.invalidateQueries({ queryKey: labKey(labId, readSamples) });
       }),
     anotherFile: () => {

@@ -2,7 +2,7 @@ import { useLocalSearchParams, type Href } from 'expo-router';
 import { useState } from 'react';
 import { View } from 'react-native';
 import { useLabQuery, wordsOf } from '@/components/api';
-import { Empty, Loading, Panel, ProblemNotice, Screen, Section, Select } from '@/components/ui';
+import { Empty, Label, Loading, Panel, ProblemNotice, Screen, Section, Select } from '@/components/ui';
 import { getProtocol, getRevision, type ProtocolView } from '@/shared/contracts/protocols';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { DifferencesList } from './differences-list';
@@ -30,7 +30,7 @@ export function ProtocolRevisionsScreen() {
       title={`Revisions of ${protocol.name}`}
       back={back}
       testID="protocol-revisions"
-      aside={protocol.revisions.length === 0 ? undefined : <Comparison protocol={protocol} />}
+      aside={protocol.revisions.length === 0 ? undefined : hasTwo(protocol) ? <Comparison protocol={protocol} /> : <OnlyOne />}
     >
       {protocol.revisions.length === 0 ? (
         <Empty title="Nothing issued yet" icon="document">
@@ -41,6 +41,19 @@ export function ProtocolRevisionsScreen() {
         <RevisionCard key={revision.number} protocol={protocol} revision={revision} />
       ))}
     </Screen>
+  );
+}
+
+/** Two revisions, or one and a draft that says something else. */
+const hasTwo = ({ revisions, draftDiffers }: ProtocolView): boolean => revisions.length > 1 || draftDiffers;
+
+function OnlyOne() {
+  return (
+    <Section title="Compare two">
+      <Panel testID="only-one-revision">
+        <Label>There is one revision only, and the draft is the same. Change the draft or issue another revision to compare.</Label>
+      </Panel>
+    </Section>
   );
 }
 
@@ -56,7 +69,7 @@ function Comparison({ protocol }: { protocol: ProtocolView }) {
     { value: draft, label: 'Draft' },
     ...protocol.revisions.map(({ number }) => ({ value: String(number), label: `Revision ${number}` })),
   ];
-  const [from, setFrom] = useState(String(protocol.revisions[1]?.number ?? protocol.revisions[0]?.number ?? draft));
+  const [from, setFrom] = useState(String(protocol.revisions[protocol.draftDiffers ? 0 : 1]?.number ?? draft));
   const [to, setTo] = useState(protocol.draftDiffers ? draft : String(protocol.revisions[0]?.number ?? draft));
   const before = useSide(protocol, from);
   const after = useSide(protocol, to);
@@ -71,7 +84,13 @@ function Comparison({ protocol }: { protocol: ProtocolView }) {
         </View>
       </View>
       <Panel className="py-2">
-        {before === null || after === null ? <Loading label="Reading both" /> : <DifferencesList before={before} after={after} />}
+        {from === to ? (
+          <Label testID="one-with-itself">Both sides are the same one: choose another on one side.</Label>
+        ) : before === null || after === null ? (
+          <Loading label="Reading both" />
+        ) : (
+          <DifferencesList before={before} after={after} />
+        )}
       </Panel>
     </Section>
   );

@@ -45,7 +45,8 @@ export const stepIcons: Record<StepKind, IconName> = {
   repeat: 'repeat',
 };
 
-const targetWords = (to: SwingTarget): string => (typeof to === 'string' ? to : formatDegrees(to.angle_deg));
+/** The station a swing goes to, or its angle. */
+export const targetWords = (to: SwingTarget): string => (typeof to === 'string' ? to : formatDegrees(to.angle_deg));
 
 function repeatTitle({ times, until }: RepeatStep): string {
   if (times !== undefined) return `Repeat ${times === 1 ? 'once' : `${times} times`}`;

@@ -4,31 +4,32 @@ import { Body, Icon, Label, Num, Row, Section } from '@/components/ui';
 import type { StepRowView } from '@/shared/contracts/runs';
 import { formatTimeUncertainty } from '@/shared/lib/format-duration';
 import { formatClock } from '@/shared/lib/format-time';
-import { stepMark, stepTitle } from './run-words';
+import { stepMark, stepTitle, type TargetSource } from './run-words';
 
 interface RecentStepsProps {
   runId: string;
+  protocol: TargetSource;
   rows: readonly StepRowView[];
   timeZone: string;
   count?: number;
 }
 
 /** The newest rows of the step log, and the way to all of it. */
-export function RecentSteps({ runId, rows, timeZone, count = 6 }: RecentStepsProps) {
+export function RecentSteps({ runId, protocol, rows, timeZone, count = 6 }: RecentStepsProps) {
   const newest = rows.slice(-count).reverse();
   return (
     <Section title="Step log" trailing={<TextLink href={`/runs/${runId}/log`} label="All steps" />}>
       <View>
         {newest.length === 0 ? <Label>Nothing yet.</Label> : null}
         {newest.map((row, index) => (
-          <StepLine key={row.seq} row={row} timeZone={timeZone} last={index === newest.length - 1} />
+          <StepLine key={row.seq} row={row} title={stepTitle(row, protocol)} timeZone={timeZone} last={index === newest.length - 1} />
         ))}
       </View>
     </Section>
   );
 }
 
-function StepLine({ row, timeZone, last }: { row: StepRowView; timeZone: string; last: boolean }) {
+function StepLine({ row, title, timeZone, last }: { row: StepRowView; title: string; timeZone: string; last: boolean }) {
   const mark = stepMark(row);
   const open = row.endUtcMs === null;
   return (
@@ -38,7 +39,7 @@ function StepLine({ row, timeZone, last }: { row: StepRowView; timeZone: string;
       </Num>
       <Icon name={mark.icon} size={14} tone={mark.tone === 'on-lamp' ? 'onLamp' : mark.tone} />
       <Body className="min-w-0 shrink grow" numberOfLines={1}>
-        {stepTitle(row)}
+        {title}
       </Body>
       <View className="flex-none items-end">
         <Num size={13}>{formatClock(row.startUtcMs, { timeZone, precision: 'ms' })}</Num>

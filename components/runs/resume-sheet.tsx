@@ -36,7 +36,7 @@ export function ResumeSheet({ view, timeZone, serverNowMs, onClose }: ResumeShee
   const facts: [string, string][] = [
     ['Rig', view.rigName],
     ['Protocol', `${view.protocolName}, revision ${view.protocolRevision}`],
-    ['Goes on with', view.current === null ? 'the next step' : stepTitle(view.current)],
+    ['Goes on with', view.current === null ? 'the next step' : stepTitle({ ...view.current, outcome: null }, view.protocol)],
     ['Dwells left', String(Math.max(0, view.dwellsPlanned - view.dwellsDone))],
     ...(view.predictedEndAt === null || left === null || left < 0
       ? []

@@ -59,7 +59,7 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
   const { local, tap } = useIntervention({ labId, runId: view.id });
   const strip = useRunStrip(view.id, state, timeZone);
   const plan = <PlanPanel view={view} rows={state.rows} beat={state.beat} lost={lost} large={wide} />;
-  const log = <RecentSteps runId={view.id} rows={state.rows} timeZone={timeZone} count={wide ? 7 : 4} />;
+  const log = <RecentSteps runId={view.id} protocol={view.protocol} rows={state.rows} timeZone={timeZone} count={wide ? 7 : 4} />;
   return (
     <Screen
       title={view.rigName}

@@ -1,6 +1,9 @@
 import type { RunState, RunSummary, RunView, StepRowView } from '@/shared/contracts/runs';
 import { laneOf, type Lane } from '@/components/charts/strip-model';
 import { formatClock } from '@/shared/lib/format-time';
+import type { ProtocolDocument } from '@/shared/protocol/document';
+import { parseStepPath, stepAt } from '@/shared/protocol/step-path';
+import { targetWords } from '@/components/protocols/step-words';
 import type { IconName, Tone } from '@/components/ui';
 
 /** The words of a run. Pure. */
@@ -40,14 +43,30 @@ export const isOver = (state: RunState): boolean => state === 'finished' || stat
 const laneMark = (lane: Lane): StateMark =>
   lane === 'near' ? { icon: 'near', tone: 'near' } : lane === 'far' ? { icon: 'far', tone: 'far' } : { icon: 'clear', tone: 'dim' };
 
-/** A row of the log as a title: `Dwell, near side`, `Swing to far`, `Wait`. */
-export function stepTitle(row: Pick<StepRowView, 'kind' | 'station' | 'label'>): string {
+type TitledRow = Pick<StepRowView, 'kind' | 'station' | 'label' | 'path' | 'outcome'>;
+
+/** What the target of a step is looked up in. */
+export type TargetSource = Pick<ProtocolDocument, 'steps' | 'atEnd'>;
+
+/** Where a swing goes or was to go: a swing that was cut short ended at no station, so its row names none and the protocol tells. */
+function swingTarget(row: Pick<StepRowView, 'station' | 'path'>, protocol: TargetSource | null): string {
+  if (row.station !== '' || protocol === null) return row.station;
+  if (row.path === 'atEnd.swing') return protocol.atEnd?.station ?? '';
+  const path = parseStepPath(row.path);
+  const step = path === null ? null : stepAt(protocol, path);
+  return step?.kind === 'swing' ? targetWords(step.to) : '';
+}
+
+/** A row of the log as a title: `Dwell, near side`, `Swing to far`, `Swing to near, cut short`, `Wait`. */
+export function stepTitle(row: TitledRow, protocol: TargetSource | null): string {
   const side = laneOf(row.station) === 'other' ? (row.station === '' ? '' : ` at ${row.station}`) : `, ${row.station} side`;
   switch (row.kind) {
     case 'home':
       return 'Home: finding the edge';
-    case 'swing':
-      return row.station === '' ? 'Swing' : `Swing to ${row.station}`;
+    case 'swing': {
+      const target = swingTarget(row, protocol);
+      return `Swing${target === '' ? '' : ` to ${target}`}${row.outcome === 'cut short' ? ', cut short' : ''}`;
+    }
     case 'mark':
       return row.label === '' ? 'Mark' : `Mark: ${row.label}`;
     case 'ring-down':
@@ -61,8 +80,9 @@ export const stepMark = (row: Pick<StepRowView, 'kind' | 'station'>): StateMark 
   row.kind === 'home' ? { icon: 'home', tone: 'text' } : laneMark(laneOf(row.station));
 
 /** What the run is doing, in a few words, with the mark that says the same without colour. */
-export function runTitle(view: Pick<RunView, 'state' | 'current'>): { words: string; mark: StateMark } {
-  if (view.state === 'running' && view.current !== null) return { words: stepTitle(view.current), mark: stepMark(view.current) };
+export function runTitle(view: Pick<RunView, 'state' | 'current' | 'protocol'>): { words: string; mark: StateMark } {
+  if (view.state === 'running' && view.current !== null)
+    return { words: stepTitle(view.current, view.protocol), mark: stepMark(view.current) };
   return { words: stateWords[view.state], mark: stateMarks[view.state] };
 }
 

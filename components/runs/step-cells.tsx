@@ -5,7 +5,7 @@ import { formatDegrees } from '@/shared/lib/format-angle';
 import { formatDelay, formatTimeUncertainty } from '@/shared/lib/format-duration';
 import { formatSignificant } from '@/shared/lib/format-number';
 import { formatLocalHonest, formatUtcHonest } from '@/shared/lib/format-time';
-import { stepMark, stepTitle } from './run-words';
+import { stepMark, stepTitle, type TargetSource } from './run-words';
 import { isUnproved, outcomeOf } from './step-filter';
 
 export interface TimeBase {
@@ -113,7 +113,7 @@ export function OutcomeCell({ row }: { row: StepRowView }) {
   );
 }
 
-export function TitleCell({ row }: { row: StepRowView }) {
+export function TitleCell({ row, protocol }: { row: StepRowView; protocol: TargetSource | null }) {
   const mark = stepMark(row);
   return (
     <View className="min-w-0 flex-row items-start gap-2.5">
@@ -121,7 +121,7 @@ export function TitleCell({ row }: { row: StepRowView }) {
         <Icon name={mark.icon} size={15} tone={mark.tone === 'on-lamp' ? 'onLamp' : mark.tone} />
       </View>
       <View className="min-w-0 shrink">
-        <Body>{stepTitle(row)}</Body>
+        <Body>{stepTitle(row, protocol)}</Body>
         <Label className="font-mono">
           {row.path}
           {row.label === '' || row.kind === 'mark' ? '' : ` · ${row.label}`}

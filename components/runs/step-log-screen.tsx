@@ -9,7 +9,7 @@ import { DownloadLink } from './download-link';
 import { ChainHead } from './event-list';
 import { isOver } from './run-words';
 import { everything, filterChoices, filterSteps, noFilter, type StepFilter } from './step-filter';
-import { StepCards, StepTable } from './step-table';
+import { StepCards, StepTable, type StepListProps } from './step-table';
 import { useEvents } from './use-events';
 
 const everyMs = 4000;
@@ -41,26 +41,20 @@ export function StepLogScreen() {
       {steps.isSuccess && rows.length === 0 ? (
         <Empty title="No steps yet">The first row appears when the run begins its first step.</Empty>
       ) : null}
-      {rows.length === 0 ? null : <LoggedSteps rows={rows} events={events.data ?? []} timeZone={timeZone} />}
+      {rows.length === 0 ? null : (
+        <LoggedSteps rows={rows} events={events.data ?? []} protocol={run.data?.data.protocol ?? null} timeZone={timeZone} />
+      )}
     </Screen>
   );
 }
 
-function LoggedSteps({
-  rows,
-  events,
-  timeZone,
-}: {
-  rows: readonly StepRowView[];
-  events: NonNullable<ReturnType<typeof useEvents>['data']>;
-  timeZone: string;
-}) {
+function LoggedSteps({ rows, events, protocol, timeZone }: Pick<StepListProps, 'rows' | 'events' | 'protocol' | 'timeZone'>) {
   const wide = useWide();
   const [filter, setFilter] = useState<StepFilter>(noFilter);
   const [zone, setZone] = useState<'lab' | 'utc'>('lab');
   const [open, setOpen] = useState<number | null>(null);
   const shown = useMemo(() => filterSteps(rows, filter), [rows, filter]);
-  const list = { rows: shown, events, base: { timeZone: zone === 'utc' ? null : timeZone }, timeZone, open, onOpen: setOpen };
+  const list = { rows: shown, events, protocol, base: { timeZone: zone === 'utc' ? null : timeZone }, timeZone, open, onOpen: setOpen };
   return (
     <View className="gap-4">
       <Filters rows={rows} filter={filter} onChange={setFilter} />

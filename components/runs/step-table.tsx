@@ -5,11 +5,14 @@ import type { ChainedEvent } from '@/shared/archive/run-records';
 import type { StepRowView } from '@/shared/contracts/runs';
 import { EventList } from './event-list';
 import { AngleCell, InstantCell, OutcomeCell, TitleCell, type TimeBase } from './step-cells';
+import type { TargetSource } from './run-words';
 import { eventsOf } from './use-events';
 
 export interface StepListProps {
   rows: readonly StepRowView[];
   events: readonly ChainedEvent[];
+  /** Of the run; null until it is there. */
+  protocol: TargetSource | null;
   base: TimeBase;
   timeZone: string;
   /** Seq of the row whose events are shown. */
@@ -21,7 +24,7 @@ const head = 'py-2 pr-4 text-left font-sans text-13 font-regular text-dim';
 const cell = 'py-2.5 pr-4 align-top';
 
 /** The step log as a table, for wide screens. */
-export function StepTable({ rows, events, base, timeZone, open, onOpen }: StepListProps) {
+export function StepTable({ rows, events, protocol, base, timeZone, open, onOpen }: StepListProps) {
   return (
     <table className="w-full border-collapse" data-testid="step-table">
       <thead>
@@ -43,7 +46,7 @@ export function StepTable({ rows, events, base, timeZone, open, onOpen }: StepLi
                 </Num>
               </td>
               <td className={cell}>
-                <TitleCell row={row} />
+                <TitleCell row={row} protocol={protocol} />
               </td>
               <td className={cell}>
                 <InstantCell plannedUtcMs={row.plannedStartUtcMs} actualUtcMs={row.startUtcMs} uS={row.uStartS} base={base} />
@@ -77,7 +80,7 @@ export function StepTable({ rows, events, base, timeZone, open, onOpen }: StepLi
 }
 
 /** The step log as cards, for phones. */
-export function StepCards({ rows, events, base, timeZone, open, onOpen }: StepListProps) {
+export function StepCards({ rows, events, protocol, base, timeZone, open, onOpen }: StepListProps) {
   return (
     <View className="gap-3" role="list">
       {rows.map((row) => (
@@ -88,7 +91,7 @@ export function StepCards({ rows, events, base, timeZone, open, onOpen }: StepLi
                 <Num size={13} tone="dim" className="w-7 pt-0.5">
                   {row.seq}
                 </Num>
-                <TitleCell row={row} />
+                <TitleCell row={row} protocol={protocol} />
               </View>
               <OutcomeCell row={row} />
             </View>

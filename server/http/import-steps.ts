@@ -5,6 +5,7 @@ import { inTurns } from '@/server/ingest/receive-file';
 import type { SampleBatch } from '@/server/interfaces/sample-store';
 import { readPieces, type ImportRecord } from '@/server/store/imports';
 import type { RunRecord } from '@/server/store/runs-read';
+import { formatDuration } from '@/shared/lib/format-duration';
 import { isoOrNull } from './maker';
 import { ProblemError } from './problem-error';
 import type { Services } from './services';
@@ -64,9 +65,15 @@ function overlapOf(reading: CsvReading, run: RunRecord, nowUtcMs: number): { sha
       lastUtcMs <= from ? `end ${spoken(from - lastUtcMs)} before the run began` : `begin ${spoken(firstUtcMs - to)} after the run ended`;
     return { share: 0, words: `the data ${side}` };
   }
-  const share = common / (to - from);
-  return { share, words: `covers ${String(Math.round(100 * Math.min(1, share)))} % of the run` };
+  const share = Math.min(1, common / (to - from));
+  const percent = Math.round(100 * share);
+  return {
+    share,
+    words: percent < 10 ? `covers ${spanWords(common)} of the run’s ${spanWords(to - from)}` : `covers ${String(percent)} % of the run`,
+  };
 }
+
+const spanWords = (ms: number) => formatDuration(ms / 1000);
 
 function spoken(ms: number): string {
   const s = ms / 1000;

@@ -37,6 +37,7 @@ const check = (code: string, title: string, outcome: { state: StartCheck['state'
 });
 const pass = (detail: string) => ({ state: 'pass' as const, detail });
 const fail = (detail: string) => ({ state: 'fail' as const, detail });
+const unanswered = 'Not known: the controller has not answered.';
 const note = (detail: string) => ({ state: 'note' as const, detail });
 
 /** Everything that stands between a rig and a start, each with a sentence. */
@@ -57,7 +58,7 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
       'interlock',
       'Interlock',
       controller === null
-        ? fail('Not known: the controller has not answered.')
+        ? fail(unanswered)
         : controller.interlockClosed
           ? pass('Closed.')
           : fail('Open: close the door of the room or the guard.'),
@@ -65,13 +66,9 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
     check(
       'supply',
       'Motor supply',
-      controller === null
-        ? fail('Not known: the controller has not answered.')
-        : controller.supplyPresent
-          ? pass('Present.')
-          : fail('Off: switch it on at the rig.'),
+      controller === null ? fail(unanswered) : controller.supplyPresent ? pass('Present.') : fail('Off: switch it on at the rig.'),
     ),
-    check('still', 'Turntable', controller?.moving === true ? fail('It is moving: wait until it stands still.') : pass('Stands still.')),
+    check('still', 'Turntable', stillCheck(controller)),
     check('protocol', 'Protocol on this rig', protocolCheck(plan, controller, nowUtcMs)),
     check('data', 'Deflection', await dataCheck(services, station, nowUtcMs)),
     check('free', 'No other run', freeCheck(services, plan.rig.id, runs.get(plan.rig.id))),
@@ -90,11 +87,17 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
 function linkCheck(station: RigStation | null) {
   if (station === null) return fail('This server does not drive the rig.');
   const { condition, detail } = station.link.health();
-  return condition === 'ready' ? pass('The controller answers.') : fail(`Not ready: ${detail === '' ? condition : detail}.`);
+  if (condition === 'ready') return pass('The controller answers.');
+  return fail(`Not ready: ${detail === '' ? `${condition}.` : detail}`);
+}
+
+function stillCheck(controller: ControllerState | null) {
+  if (controller === null) return fail(unanswered);
+  return controller.moving ? fail('It is moving: wait until it stands still.') : pass('Stands still.');
 }
 
 function homedCheck({ protocol }: StartPlan, controller: { positionKnown: boolean; angleDeg: number | null } | null) {
-  if (controller === null) return fail('Not known: the controller has not answered.');
+  if (controller === null) return fail(unanswered);
   if (controller.positionKnown) return pass(controller.angleDeg === null ? 'Known.' : `Known: ${formatDegrees(controller.angleDeg)}.`);
   const first = protocol.steps[0]?.kind;
   return first === 'home'
@@ -129,9 +132,9 @@ function freeCheck(services: Services, rigId: string, run: RunListRow | undefine
   return run === undefined ? pass('The rig is free.') : fail(busyWords(run));
 }
 
-/** Names the run that has the rig. */
+/** Names the run that has the rig; there is never more than one. */
 export const busyWords = (run: RunListRow): string =>
-  `The run "${run.protocolName}" (${run.id}), started by ${run.operator}, is ${run.state}. Wait for its end, or stop it.`;
+  `The run of "${run.protocolName}", revision ${String(run.protocolRevision)}, started by ${run.operator}, is ${run.state}. Wait for its end, or stop it.`;
 
 function armedCheck(services: Services, { rig, timeZone }: StartPlan, timeline: Timeline) {
   const arm = services.arms.armOf(rig.id);

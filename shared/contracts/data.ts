@@ -59,7 +59,7 @@ export const importCheckSchema = z.strictObject({
   /** The first 100 problems, and how many there are in all. */
   problems: z.array(importProblemSchema),
   problemCount: z.number().int(),
-  /** In words: how the data lie against the run, for example `covers 100 % of the run`. */
+  /** In words: how the data lie against the run, for example `covers 100 % of the run` or `covers 40 s of the run’s 2 h 48 min`. */
   overlap: z.string(),
 });
 export type ImportCheck = z.infer<typeof importCheckSchema>;

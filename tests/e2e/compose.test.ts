@@ -120,7 +120,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.at('compare-from').scrollIntoViewIfNeeded();
     await hand.shoots('revisions');
     await hand.chooses('compare-from', '2');
-    await hand.sees('They are the same.');
+    await hand.sees('Both sides are the same one');
   });
 
   chapter('takes the protocol out as JSON that keeps to the published schema, and brings it back', async () => {

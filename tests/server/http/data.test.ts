@@ -115,6 +115,13 @@ describe('a deflection file', () => {
     expect((await commit(id, 'readout').expect(409)).body.detail).toContain('is stored already');
   });
 
+  test('that covers little of the run says how much in time, not in percent', async () => {
+    const short = deflection().split('\n').slice(0, 4).join('\n');
+    const checked = await check(await sent(`${short}\n`)).expect(200);
+    expect(checked.body.ok).toBe(true);
+    expect(checked.body.overlap).toMatch(/^covers 4.s of the run’s \d+.min( \d+.s)?$/);
+  });
+
   test('sent again is known: nothing is stored twice, and other values at the same instants are refused', async () => {
     const again = await commit(await sent(deflection()), 'readout').expect(200);
     expect(again.body).toMatchObject({ stored: 0, known: expect.any(Number) });

@@ -199,6 +199,18 @@ describe('start checks', () => {
     expect(await stateOf('data')).toMatchObject({ state: 'pass' });
   });
 
+  test('say of nothing that it is well while nothing talks at the line', async () => {
+    const link = { kind: 'serial', path: '/dev/evenfall-no-such-port', baudRate: 115_200 };
+    const made = await lab.as('keeper', 'POST', rigs).send({ name: 'Far bench', document: demoRigWide, link }).expect(201);
+    await lab.advance(40_000);
+    const query = `protocolId=${demoIds.shortProtocol}&revision=1`;
+    const { body } = await lab.as('viewer', 'GET', `${rigs}/${made.body.id}/start-checks?${query}`).expect(200);
+    const told = new Map(body.checks.map((one: { code: string; state: string; detail: string }) => [one.code, one]));
+    for (const code of ['interlock', 'supply', 'still'])
+      expect(told.get(code)).toMatchObject({ state: 'fail', detail: 'Not known: the controller has not answered.' });
+    expect(told.get('link')).toMatchObject({ state: 'fail', detail: expect.stringMatching(/^Not ready: .*[^.]\.$/) });
+  });
+
   test('of a revision that is not there', async () => {
     await lab.as('viewer', 'GET', `${rig}/start-checks?protocolId=${demoIds.shortProtocol}&revision=7`).expect(404);
     await lab.as('viewer', 'GET', `${rig}/start-checks?protocolId=${demoIds.shortProtocol}`).expect(400);
