@@ -6,6 +6,7 @@ import { SimulatedLine } from '../simulated-line';
 import { type BoardHost, LocalBoardHost } from './board-host';
 import { BoardSession, type SessionOptions } from './board-session';
 import { commission } from './commission';
+import type { BoardListeners } from './emulated-board';
 import { referenceFirmware } from './firmware-file';
 
 export interface EmulatedControllerOptions {
@@ -39,8 +40,10 @@ export function createEmulatedController(options: EmulatedControllerOptions): Si
 export function commissionedSession(
   { rig, homed, startSteps }: { rig: RigMotion; homed: boolean; startSteps: number },
   options: Omit<SessionOptions, 'program' | 'startSteps'> = {},
+  listeners: Pick<BoardListeners, 'onEdge'> = {},
 ): BoardSession {
-  const session = new BoardSession({ ...options, program: referenceFirmware(), startSteps: homed ? NEAR_EDGE_STEPS : startSteps });
+  const start = homed ? NEAR_EDGE_STEPS : startSteps;
+  const session = new BoardSession({ ...options, program: referenceFirmware(), startSteps: start }, listeners);
   commission(session, rig, { homedAt: homed ? startSteps : null });
   return session;
 }

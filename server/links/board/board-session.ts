@@ -31,6 +31,8 @@ export class BoardSession {
   private readonly lines: BoardLine[] = [];
   private readonly cyclesPerMs: number;
   private text = '';
+  /** The cycle at which the last byte that was written has arrived. */
+  lastArrivedCycle = 0;
   private born = { ms: 0, cycle: 0 };
 
   constructor({ ratePpm = DEFAULT_RATE_PPM, ...options }: SessionOptions, listeners: Pick<BoardListeners, 'onEdge'> = {}) {
@@ -47,8 +49,8 @@ export class BoardSession {
   /** Bytes that the host begins to write. */
   write(bytes: string, atMs: number): BoardLine[] {
     this.board.runTo(this.cycleAt(atMs));
-    const arrived = this.board.send(bytes);
-    return bytes.trim() === '' ? this.told() : this.untilAnswer(arrived);
+    this.lastArrivedCycle = this.board.send(bytes);
+    return bytes.trim() === '' ? this.told() : this.untilAnswer(this.lastArrivedCycle);
   }
 
   do(deed: BoardDeed, atMs: number): BoardLine[] {
