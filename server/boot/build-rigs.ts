@@ -88,6 +88,7 @@ export function buildRigSide(
     const why = endOfArm(event, wasKnown);
     known.set(station.rigId, knownAfter(event, wasKnown));
     if (why !== null) arms.end(station, why, engineItself);
+    if (event.kind === 'clock-stepped') log.warn({ rigId: station.rigId, clock: event.clock, byMs: event.byMs }, 'a clock stepped');
     guided.heard(station.rigId, event);
   }
 

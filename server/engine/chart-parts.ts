@@ -17,6 +17,7 @@ import {
   hasRestarted,
   noteArmEnded,
   noteArmKey,
+  noteClock,
   noteInterlock,
   noteLease,
   noteLost,
@@ -167,6 +168,7 @@ export const refusals = (isFor: (told: Told) => boolean, again: Writer) => [
 /** What the controller tells in every state, and what is only written down. */
 export const heard = {
   'link.arm-key': { actions: act(noteArmKey) },
+  'link.clock-stepped': { actions: act(noteClock) },
   'link.edge': { actions: act(noteEdge) },
   'link.standstill': { actions: act(noteStandstill) },
   'link.lease-lapsed': { actions: act(noteLease) },

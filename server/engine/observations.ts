@@ -99,6 +99,12 @@ export function noteArmKey(draft: Draft): void {
   draft.log('arm-key', { on: draft.told('link.arm-key').link.on });
 }
 
+/** Stamps before and after a step of a clock are not to be subtracted without a look. */
+export function noteClock(draft: Draft): void {
+  const { clock, byMs } = draft.told('link.clock-stepped').link;
+  draft.log('clock-stepped', { clock, byMs });
+}
+
 export function noteLease(draft: Draft): void {
   draft.log('lease-lapsed');
 }

@@ -90,7 +90,9 @@ export type LinkEvent =
   /** The controller restarted: position is lost, whatever was running is over. */
   | { kind: 'reset'; at: Instant; bootId: string }
   /** The motion lease lapsed in the controller. */
-  | { kind: 'lease-lapsed'; at: Instant };
+  | { kind: 'lease-lapsed'; at: Instant }
+  /** One of the clocks jumped: the host's wall clock against its monotonic one, or the controller's against the host's. */
+  | { kind: 'clock-stepped'; at: Instant; clock: 'host' | 'controller'; byMs: number };
 
 export interface LinkHealth {
   condition: LinkCondition;
@@ -98,10 +100,29 @@ export interface LinkHealth {
   detail: string;
   lastReplyUtcMs: number | null;
   roundTripMs: number | null;
+  /** Of the last 100 answers; null before the first. */
+  roundTripP50Ms: number | null;
+  roundTripP95Ms: number | null;
+  /** Lines that came in and were no message, and their bytes. */
   discardedLines: number;
+  discardedBytes: number;
+  /** Lines that the controller dropped since it started, modulo 65536; null before it told. */
+  droppedByController: number | null;
+  /** Requests that were written again because no answer came. */
+  retries: number;
   reconnects: number;
   clockOffsetMs: number | null;
+  /** Standard uncertainty of the offset, s. */
   clockUS: number | null;
+  /** How much faster the controller's clock runs, parts per million, with its standard uncertainty; null before there is a line to fit. */
+  driftPpm: number | null;
+  driftUPpm: number | null;
+  bootId: string | null;
+  firmware: string | null;
+  /** Version of the line protocol that the controller speaks. */
+  protocol: string | null;
+  /** Epoch of another driver that the controller has met and that keeps this one out; null: none does. */
+  higherEpoch: number | null;
 }
 
 export interface TurntableLink {

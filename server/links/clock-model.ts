@@ -50,6 +50,9 @@ const PRIOR_SLOPE = 1e-4;
 const LEAST_SCATTER_MS = 0.01;
 /** The offset of one exchange lies anywhere within ± delay / 2 (RFC 5905): a rectangle of that width has the standard uncertainty delay / √12. */
 const RECTANGLE = Math.sqrt(12);
+/** A clock has stepped, and the model is not merely off, beyond so many standard uncertainties and ms. */
+const STEP_SIGMAS = 6;
+const LEAST_STEP_MS = 5;
 const UNKNOWN: Estimate = { ms: 0, uMs: 1000 };
 
 export class ClockModel {
@@ -76,6 +79,25 @@ export class ClockModel {
 
   get known(): boolean {
     return this.stretches.length > 0;
+  }
+
+  /** How much faster the controller's clock runs, as a ratio less 1; null before two stretches of time are known. */
+  get drift(): { slope: number; uSlope: number } | null {
+    const line = this.stretches.length < 2 ? null : this.fitted();
+    return line === null ? null : { slope: line.slope, uSlope: Math.sqrt(line.varSlope) };
+  }
+
+  /**
+   * By how much an exchange contradicts the model, ms; 0 when it does not. The true offset lies within half of the delay of the one
+   * measured (RFC 5905), whatever the line does: what lies further off is a step of a clock.
+   */
+  contradiction({ t1Ms, t2Us, t3Us, t4Ms }: Pick<ClockExchange, 't1Ms' | 't2Us' | 't3Us' | 't4Ms'>): number {
+    if (!this.known) return 0;
+    const offsetMs = (t2Us / 1000 - t1Ms + (t3Us / 1000 - t4Ms)) / 2;
+    const delayMs = t4Ms - t1Ms - (t3Us - t2Us) / 1000;
+    const { ms, uMs } = this.offsetAt((t1Ms + t4Ms) / 2);
+    const off = offsetMs - ms;
+    return Math.abs(off) > Math.max(0, delayMs) / 2 + STEP_SIGMAS * uMs + LEAST_STEP_MS ? off : 0;
   }
 
   /** Controller minus host at the host's monotonic time `atMs`. */

@@ -11,6 +11,8 @@ export class ControllerReport {
   /** The event up to which the state is known. */
   private event = 0;
   private atUs = 0;
+  /** Lines that the controller dropped since its start, modulo 65536. */
+  dropped: number | null = null;
   /** Whether anything was told yet. */
   known = false;
 
@@ -20,6 +22,7 @@ export class ControllerReport {
     this.known = false;
     this.event = 0;
     this.atUs = 0;
+    this.dropped = null;
   }
 
   /** A reply that is older than what is known changes nothing. */
@@ -30,6 +33,7 @@ export class ControllerReport {
     this.position = body.position;
     this.flags = body.flags;
     this.event = body.event;
+    this.dropped = body.dropped;
     this.atUs = receivedUs;
   }
 

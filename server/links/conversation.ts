@@ -11,34 +11,12 @@ import {
   type Reply,
   type ReplyBody,
 } from '@/firmware-protocol/codec';
-import type { Clock } from '../interfaces/clock';
-import type { ClockModel } from './clock-model';
-import { isTimed, type CommandBook } from './command-book';
+import { isTimed } from './command-book';
 import type { CommandInput } from './command-life';
-import type { ControllerReport } from './controller-report';
+import type { ConversationSetting } from './conversation-setting';
 import { EventSequence } from './event-sequence';
-import type { Lease } from './lease';
-import type { LinkMetrics } from './link-metrics';
-import type { LinkTelling } from './link-telling';
 import { epochRefusal, versionRefusal } from './link-words';
-import type { Teaching } from './teaching';
-import type { LiveRequest, Wire } from './wire';
-
-export interface ConversationSetting {
-  clock: Clock;
-  wire: Wire;
-  book: CommandBook;
-  telling: LinkTelling;
-  model: ClockModel;
-  metrics: LinkMetrics;
-  teaching: Teaching;
-  lease: Lease;
-  report: ControllerReport;
-  /** Everything is known that is needed to drive: once for each line and each start of the controller. */
-  ready(sameBoot: boolean): void;
-  /** This controller cannot be driven. */
-  refused(why: string): void;
-}
+import type { LiveRequest } from './wire';
 
 /** What is asked next on a fresh line or session. */
 type Phase = 'hello' | 'limits' | 'status' | 'talking';
@@ -59,6 +37,8 @@ export class Conversation {
   event: EventMessage | null = null;
   /** The controller's own limits, as told last. */
   limits: LimitsBody | null = null;
+  /** Epoch of another driver that keeps this one out. */
+  higherEpoch: number | null = null;
   heartbeatDue = false;
   private readonly events = new EventSequence();
   /** Events count from the first status of a boot on; what comes before belongs to somebody else. */
@@ -210,11 +190,12 @@ export class Conversation {
   }
 
   private heardHello({ body }: Reply): void {
-    if (body.word === 'no')
-      return this.setting.refused(
-        body.code === 'epoch' ? epochRefusal(body.detail) : `The controller refuses to be greeted (${body.code}).`,
-      );
+    if (body.word === 'no') {
+      if (body.code === 'epoch') return this.keptOut(body.detail);
+      return this.setting.refused(`The controller refuses to be greeted (${body.code}).`);
+    }
     if (body.word !== 'hi') return;
+    this.higherEpoch = null;
     const why = versionRefusal(body);
     if (why !== null) return this.setting.refused(why);
     this.setting.wire.openSession(body.session);
@@ -240,7 +221,13 @@ export class Conversation {
     this.rereadUpTo = 0;
   }
 
-  private hearNo(request: LiveRequest, reply: Reply, { code }: NoBody): void {
+  /** Another server's epoch is higher (SPEC 3.3). */
+  private keptOut(epoch: number): void {
+    this.higherEpoch = epoch;
+    this.setting.refused(epochRefusal(epoch));
+  }
+
+  private hearNo(request: LiveRequest, reply: Reply, { code, detail }: NoBody): void {
     const { wire } = this.setting;
     if (code === 'session' && request.of !== 'hello') {
       this.input(request, { kind: 'cut-off' });
@@ -248,7 +235,7 @@ export class Conversation {
     }
     if (code === 'epoch' && request.of !== 'hello') {
       this.input(request, { kind: 'no' }, reply);
-      return this.setting.refused(epochRefusal(reply.body.word === 'no' ? reply.body.detail : 0));
+      return this.keptOut(detail);
     }
     if (code === 'repeat') return wire.input(request, { kind: 'ok' }, reply);
     if (code === 'old' || code === 'reused') return wire.input(request, { kind: 'cut-off' });

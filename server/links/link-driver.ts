@@ -1,4 +1,4 @@
-import { decodeLine, type Order } from '@/firmware-protocol/codec';
+import { decodeLine, type HiBody, type Order } from '@/firmware-protocol/codec';
 import type { RigMotion } from '@/shared/rig/document';
 import type { ByteLineFactory } from '../interfaces/byte-line';
 import type { Cancel, Clock } from '../interfaces/clock';
@@ -60,14 +60,17 @@ class LinkDriver implements TurntableLink {
   private readonly talk: Conversation;
   private cancelHeartbeat: Cancel = () => undefined;
   private lastReply: { monotonicMs: number; utcMs: number | null } = { monotonicMs: 0, utcMs: null };
-  private discardedLines = 0;
+  private discarded = { lines: 0, bytes: 0 };
   /** On the present line: lines that were dropped, and whether any reply was valid. */
   private here = { dropped: 0, answered: false };
 
   constructor(private readonly options: LinkOptions) {
     const { clock, rig, factory, epoch } = options;
     const { model, lease, teaching } = this;
-    const metrics = (this.metrics = new LinkMetrics(clock, model, factory));
+    const metrics = (this.metrics = new LinkMetrics({
+      ...{ clock, model, factory },
+      stepped: (which, byMs) => this.telling.tell({ kind: 'clock-stepped', at: this.telling.now(), clock: which, byMs }),
+    }));
     const report = (this.report = new ControllerReport(rig));
     const telling = (this.telling = new LinkTelling({ clock, model, report, rig }));
     const wire = (this.wire = new Wire(clock, epoch, () => this.act(() => undefined)));
@@ -116,16 +119,16 @@ class LinkDriver implements TurntableLink {
 
   health(): LinkHealth {
     const { condition, detail, reconnects } = this.connection;
-    const offset = this.model.known ? this.model.offsetAt(this.options.clock.monotonicMs()) : null;
     return {
-      condition,
-      detail,
-      reconnects,
+      ...{ condition, detail, reconnects },
       lastReplyUtcMs: this.lastReply.utcMs,
-      roundTripMs: this.metrics.roundTripMs,
-      discardedLines: this.discardedLines,
-      clockOffsetMs: offset?.ms ?? null,
-      clockUS: offset === null ? null : offset.uMs / 1000,
+      discardedLines: this.discarded.lines,
+      discardedBytes: this.discarded.bytes,
+      droppedByController: this.report.dropped,
+      retries: this.wire.retries,
+      higherEpoch: this.talk.higherEpoch,
+      ...this.metrics.health(),
+      ...identity(this.talk.hi),
     };
   }
 
@@ -221,7 +224,8 @@ class LinkDriver implements TurntableLink {
       this.talk.hearReply(item, line.length + 1);
     } else if (item.kind === 'event') this.talk.hearEvent(item);
     else if (item.kind !== 'blank') {
-      this.discardedLines += 1;
+      this.discarded.lines += 1;
+      this.discarded.bytes += line.length + 1;
       this.here.dropped += 1;
     }
   }
@@ -231,6 +235,7 @@ class LinkDriver implements TurntableLink {
       this.beat();
       this.act(() => {
         this.talk.heartbeatDue = true;
+        this.metrics.watchHost();
         this.noticeSilence();
       });
     });
@@ -264,4 +269,8 @@ class LinkDriver implements TurntableLink {
     this.book.each((entry) => this.wire.input(entry, { kind: 'cut-off' }));
     await detached;
   }
+}
+
+function identity(hi: HiBody | null): Pick<LinkHealth, 'bootId' | 'firmware' | 'protocol'> {
+  return { bootId: hi?.boot ?? null, firmware: hi?.firmware ?? null, protocol: hi === null ? null : `${hi.major}.${hi.minor}` };
 }

@@ -33,6 +33,8 @@ const NUMBER_MASK = 0xffff;
  */
 export class Wire {
   session = NO_SESSION;
+  /** Requests that were written again. */
+  retries = 0;
   private line: ByteLine | null = null;
   private number = 0;
   private flight: LiveRequest | null = null;
@@ -134,6 +136,7 @@ export class Wire {
   private write(request: LiveRequest): void {
     if (request.sent === null) return;
     request.sent.attempts += 1;
+    if (request.sent.attempts > 1) this.retries += 1;
     this.line?.write(request.sent.line);
   }
 }

@@ -55,10 +55,21 @@ export class FakeLink implements TurntableLink {
       detail: '',
       lastReplyUtcMs: null,
       roundTripMs: 2,
+      roundTripP50Ms: 2,
+      roundTripP95Ms: 2,
       discardedLines: 0,
+      discardedBytes: 0,
+      droppedByController: 0,
+      retries: 0,
       reconnects: 0,
       clockOffsetMs: 0,
       clockUS: 0.0002,
+      driftPpm: 0,
+      driftUPpm: 1,
+      bootId: this.bootId,
+      firmware: 'fake',
+      protocol: '1.0',
+      higherEpoch: null,
     };
   }
 
