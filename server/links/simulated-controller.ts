@@ -28,6 +28,8 @@ export interface SimulatedControllerOptions {
   baudRate?: number;
   /** Whether it was taught the rig's limits before; default true. Otherwise it has those of SPEC 8.11. */
   taught?: boolean;
+  /** Sees every line that arrives at the controller, and every line that it sends, whether or not anybody hears it. */
+  tap?: { arrived(line: string): void; sent(line: string): void };
   version?: { major: number; minor: number };
 }
 
@@ -92,9 +94,15 @@ export function createSimulatedController(options: SimulatedControllerOptions): 
     byteMs: (BITS_PER_BYTE * 1000) / (options.baudRate ?? 115_200),
     spendsByteTimes: true,
     description: 'the simulated turntable',
-    toController: (text) => act((us) => machine.receive(text, us)),
+    toController: (text) => {
+      options.tap?.arrived(text);
+      act((us) => machine.receive(text, us));
+    },
   });
-  const machine = new SimulatedMachine(setting, (text, atUs) => line.fromController(text, msAt(atUs)));
+  const machine = new SimulatedMachine(setting, (text, atUs) => {
+    options.tap?.sent(text);
+    line.fromController(text, msAt(atUs));
+  });
   let waking: { atUs: number; cancel: Cancel } | null = null;
 
   /** After anything was done to the machine: be there when its next thing falls due. */

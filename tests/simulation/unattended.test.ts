@@ -13,7 +13,7 @@ import type { StoredRun } from '@/server/interfaces/run-store';
 import type { TurntableLink } from '@/server/interfaces/turntable-link';
 import { createLink } from '@/server/links/link-driver';
 import { createSimulatedController } from '@/server/links/simulated-controller';
-import { faultyLine, type LineFault } from '@/tests/server/links/faulty-line';
+import { faultyLine, type LineFault } from '@/scripts/soak/link/faulty-line';
 import { rehearsalStart, shortProtocol, startUtcMs } from './rehearsing';
 
 /** Nights on a rig that somebody armed, with the real link and its bytes: what happens while nobody listens, and on a bad line. */

@@ -3,16 +3,20 @@ import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
 import type { ByteLineFactory } from '@/server/interfaces/byte-line';
 import type { Clock } from '@/server/interfaces/clock';
 
+/** What may happen to a line of bytes on its way; `mixed` is any of those before it. */
 export const lineFaults = ['drop', 'double', 'reorder', 'flip', 'truncate', 'delay', 'noise', 'merge', 'mixed'] as const;
-export type LineFault = (typeof lineFaults)[number];
+/** What hits only what the controller says: its replies, its events, bytes that another program reads away, and another device that talks in between. */
+const inboundFaults = ['reply-lost', 'event-lost', 'stolen', 'talker'] as const;
+export type LineFault = (typeof lineFaults)[number] | (typeof inboundFaults)[number];
 
 export interface FaultyLine {
   factory: ByteLineFactory;
-  /** Lines as the controller truly sent them. */
-  truth: { line: string; atMs: number }[];
   /** From now on every line passes as it is. */
   heal(): void;
 }
+
+/** Lines of devices that speak something else (made up). */
+const FOREIGN = ['$GPX,17,04', 'T=21.4C', 'OK', '0x3f 0x11', 'e 3 boot', 'r 1 2 3 ok'];
 
 interface FaultOptions {
   fault: LineFault;
@@ -25,17 +29,27 @@ interface FaultOptions {
 export function faultyLine(inner: ByteLineFactory, clock: Clock, { fault, seed, share }: FaultOptions): FaultyLine {
   const random = xoroshiro128plus(seed);
   const upTo = (greatest: number) => uniformInt(random, 0, greatest);
-  const truth: FaultyLine['truth'] = [];
   let healthy = false;
 
   /** A way for lines, in one direction. */
-  function way(deliver: (line: string) => void): (line: string) => void {
+  function way(deliver: (line: string) => void, isInbound: boolean): (line: string) => void {
     let held: string | null = null;
     const release = () => {
       if (held !== null) deliver(held);
       held = null;
     };
     const spoil: Record<Exclude<LineFault, 'mixed'>, (line: string) => void> = {
+      'reply-lost': (line) => (line.startsWith('r ') ? undefined : deliver(line)),
+      'event-lost': (line) => (line.startsWith('e ') ? undefined : deliver(line)),
+      stolen: (line) => {
+        const from = upTo(line.length - 1);
+        held = (held ?? '') + line.slice(0, from);
+        clock.after(400, release);
+      },
+      talker: (line) => {
+        deliver(FOREIGN[upTo(FOREIGN.length - 1)] as string);
+        deliver(line);
+      },
       drop: () => undefined,
       double: (line) => {
         deliver(line);
@@ -60,10 +74,11 @@ export function faultyLine(inner: ByteLineFactory, clock: Clock, { fault, seed, 
         clock.after(50, release);
       },
     };
-    const kinds = Object.keys(spoil) as Exclude<LineFault, 'mixed'>[];
+    const mixable = lineFaults.filter((kind) => kind !== 'mixed');
+    const spares = !isInbound && inboundFaults.some((kind) => kind === fault);
     return (line) => {
-      const hit = !healthy && line.length > 0 && upTo(9_999) < share * 10_000;
-      if (hit) return spoil[fault === 'mixed' ? (kinds[upTo(kinds.length - 1)] as Exclude<LineFault, 'mixed'>) : fault](line);
+      const hit = !healthy && !spares && line.length > 0 && upTo(9_999) < share * 10_000;
+      if (hit) return spoil[fault === 'mixed' ? (mixable[upTo(mixable.length - 1)] as Exclude<LineFault, 'mixed'>) : fault](line);
       deliver(line);
       release();
     };
@@ -72,17 +87,10 @@ export function faultyLine(inner: ByteLineFactory, clock: Clock, { fault, seed, 
   const factory: ByteLineFactory = {
     ...inner,
     open: async ({ onLine, onClosed }) => {
-      const inbound = way(onLine);
-      const line = await inner.open({
-        onLine: (text) => {
-          truth.push({ line: text, atMs: clock.monotonicMs() });
-          inbound(text);
-        },
-        onClosed,
-      });
-      const outbound = way((text) => line.write(`${text}\n`));
+      const line = await inner.open({ onLine: way(onLine, true), onClosed });
+      const outbound = way((text) => line.write(`${text}\n`), false);
       return { write: (bytes) => outbound(bytes.slice(0, -1)), close: () => line.close() };
     },
   };
-  return { factory, truth, heal: () => void (healthy = true) };
+  return { factory, heal: () => void (healthy = true) };
 }

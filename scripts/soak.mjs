@@ -1,0 +1,32 @@
+#!/usr/bin/env node
+/**
+ * `npm run soak -- NAME … [--second]`: long runs with faults from seeds; each leaves `docs/soak/NAME.json`. `--second` takes the
+ * greater figure. Whatever else begins with `--`, and its value, goes to the run.
+ */
+import { readdirSync } from 'node:fs';
+import { join } from 'node:path';
+import { ensureNodeModules } from './lib/node-modules.mjs';
+import { root } from './lib/paths.mjs';
+import { pass } from './lib/run.mjs';
+import { giveUp, say } from './lib/say.mjs';
+
+const folder = join(root, 'scripts', 'soak');
+const known = readdirSync(folder)
+  .filter((name) => name.endsWith('.ts') && name !== 'report.ts')
+  .map((name) => name.slice(0, -3))
+  .sort();
+const args = process.argv.slice(2);
+const firstOption = args.findIndex((arg) => arg.startsWith('--'));
+const names = firstOption < 0 ? args : args.slice(0, firstOption);
+const options = firstOption < 0 ? [] : args.slice(firstOption);
+const strange = names.filter((name) => !known.includes(name));
+if (strange.length > 0) giveUp(`no soak called ${strange.join(', ')}; there are: ${known.join(', ')}`);
+
+await ensureNodeModules();
+let code = 0;
+for (const name of names.length > 0 ? names : known) {
+  const ended = await pass(process.execPath, ['--import', 'tsx', join(folder, `${name}.ts`), ...options], { cwd: root, env: process.env });
+  if (ended !== 0) say(`The soak ${name} failed.`);
+  code ||= ended;
+}
+process.exit(code);

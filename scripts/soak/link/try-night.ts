@@ -1,0 +1,12 @@
+import { checks } from './checks';
+import { runNight } from './night';
+import type { Situation } from './situations';
+
+/** Runs one night and gives what is wrong with it, the name of the check before it; nothing when all holds. */
+export async function tryNight(situation: Situation, seed: number): Promise<string[]> {
+  const night = await runNight(situation, seed);
+  return Object.entries(checks).flatMap(([name, check]) => {
+    const wrong = check(night, situation);
+    return wrong === null ? [] : [`${situation.name}, seed ${seed}, ${name}: ${wrong}`];
+  });
+}

@@ -1,0 +1,31 @@
+import { execFileSync } from 'node:child_process';
+import { mkdirSync, writeFileSync } from 'node:fs';
+import { join } from 'node:path';
+
+export interface SoakResult {
+  name: string;
+  ok: boolean;
+  /** Only a part was run, to look at it again: the result is printed, not kept. */
+  partial?: boolean;
+  [figure: string]: unknown;
+}
+
+const root = join(__dirname, '..', '..');
+
+/** Prints the result as JSON and keeps it, with commit and date, in `docs/soak/NAME.json`. A violation ends the process with 1. */
+export function report({ partial = false, ...result }: SoakResult): void {
+  const git = (...args: string[]) => execFileSync('git', args, { cwd: root, encoding: 'utf8' }).trim();
+  const stamped = {
+    ...result,
+    commit: git('rev-parse', 'HEAD'),
+    date: new Date().toISOString().slice(0, 10),
+    tookS: Math.round(process.uptime()),
+  };
+  const text = `${JSON.stringify(stamped, null, 2)}\n`;
+  process.stdout.write(text);
+  if (!partial) {
+    mkdirSync(join(root, 'docs', 'soak'), { recursive: true });
+    writeFileSync(join(root, 'docs', 'soak', `${result.name}.json`), text);
+  }
+  if (!result.ok) process.exitCode = 1;
+}
