@@ -86,7 +86,6 @@ export function createSimulatedController(options: SimulatedControllerOptions): 
   const usPerMs = US_PER_MS * (1 + (options.ratePpm ?? DEFAULT_RATE_PPM) * 1e-6);
   const usAt = (monotonicMs: number) => (monotonicMs - bornMs) * usPerMs;
   const msAt = (us: number) => bornMs + us / usPerMs;
-  const nowUs = () => usAt(clock.monotonicMs());
   const setting = settingOf(options);
   const line = new SimulatedLine({
     clock,
@@ -120,7 +119,7 @@ export function createSimulatedController(options: SimulatedControllerOptions): 
   }
 
   function act(deed: (us: number) => void): void {
-    deed(nowUs());
+    deed(usAt(clock.monotonicMs()));
     wakeInTime();
   }
 

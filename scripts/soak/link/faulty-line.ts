@@ -25,62 +25,90 @@ interface FaultOptions {
   share: number;
 }
 
-/** A line that spoils a share of what passes, in both directions, and remembers what was true. */
+/** A line that is kept back for a while. */
+class Held {
+  private line: string | null = null;
+
+  constructor(private readonly deliver: (line: string) => void) {}
+
+  keep(line: string): void {
+    this.line = line;
+  }
+
+  join(line: string): void {
+    this.line = (this.line ?? '') + line;
+  }
+
+  readonly release = (): void => {
+    const { line } = this;
+    this.line = null;
+    if (line !== null) this.deliver(line);
+  };
+}
+
+interface Way {
+  clock: Clock;
+  upTo(greatest: number): number;
+  deliver(line: string): void;
+  held: Held;
+}
+
+function spoilers({ clock, upTo, deliver, held }: Way): Record<Exclude<LineFault, 'mixed'>, (line: string) => void> {
+  return {
+    'reply-lost': (line) => (line.startsWith('r ') ? undefined : deliver(line)),
+    'event-lost': (line) => (line.startsWith('e ') ? undefined : deliver(line)),
+    stolen: (line) => {
+      const from = upTo(line.length - 1);
+      held.join(line.slice(0, from));
+      clock.after(400, held.release);
+    },
+    talker: (line) => {
+      deliver(FOREIGN[upTo(FOREIGN.length - 1)] as string);
+      deliver(line);
+    },
+    drop: () => undefined,
+    double: (line) => {
+      deliver(line);
+      deliver(line);
+    },
+    reorder: (line) => {
+      held.keep(line);
+      clock.after(700, held.release);
+    },
+    flip: (line) => {
+      const place = upTo(line.length - 1);
+      deliver(line.slice(0, place) + String.fromCharCode(line.charCodeAt(place) ^ (1 << upTo(7))) + line.slice(place + 1));
+    },
+    truncate: (line) => deliver(line.slice(0, upTo(line.length - 1))),
+    delay: (line) => void clock.after(upTo(1500), () => deliver(line)),
+    noise: (line) => {
+      deliver(Array.from({ length: 1 + upTo(40) }, () => String.fromCharCode(0x20 + upTo(0xdf))).join(''));
+      deliver(line);
+    },
+    merge: (line) => {
+      held.join(line);
+      clock.after(50, held.release);
+    },
+  };
+}
+
+/** A line that spoils a share of what passes, in both directions or, for some faults, on the way in. */
 export function faultyLine(inner: ByteLineFactory, clock: Clock, { fault, seed, share }: FaultOptions): FaultyLine {
   const random = xoroshiro128plus(seed);
   const upTo = (greatest: number) => uniformInt(random, 0, greatest);
+  const mixable = lineFaults.filter((kind) => kind !== 'mixed');
   let healthy = false;
 
   /** A way for lines, in one direction. */
   function way(deliver: (line: string) => void, isInbound: boolean): (line: string) => void {
-    let held: string | null = null;
-    const release = () => {
-      if (held !== null) deliver(held);
-      held = null;
-    };
-    const spoil: Record<Exclude<LineFault, 'mixed'>, (line: string) => void> = {
-      'reply-lost': (line) => (line.startsWith('r ') ? undefined : deliver(line)),
-      'event-lost': (line) => (line.startsWith('e ') ? undefined : deliver(line)),
-      stolen: (line) => {
-        const from = upTo(line.length - 1);
-        held = (held ?? '') + line.slice(0, from);
-        clock.after(400, release);
-      },
-      talker: (line) => {
-        deliver(FOREIGN[upTo(FOREIGN.length - 1)] as string);
-        deliver(line);
-      },
-      drop: () => undefined,
-      double: (line) => {
-        deliver(line);
-        deliver(line);
-      },
-      reorder: (line) => {
-        held = line;
-        clock.after(700, release);
-      },
-      flip: (line) => {
-        const place = upTo(line.length - 1);
-        deliver(line.slice(0, place) + String.fromCharCode(line.charCodeAt(place) ^ (1 << upTo(7))) + line.slice(place + 1));
-      },
-      truncate: (line) => deliver(line.slice(0, upTo(line.length - 1))),
-      delay: (line) => void clock.after(upTo(1500), () => deliver(line)),
-      noise: (line) => {
-        deliver(Array.from({ length: 1 + upTo(40) }, () => String.fromCharCode(0x20 + upTo(0xdf))).join(''));
-        deliver(line);
-      },
-      merge: (line) => {
-        held = held === null ? line : held + line;
-        clock.after(50, release);
-      },
-    };
-    const mixable = lineFaults.filter((kind) => kind !== 'mixed');
+    const held = new Held(deliver);
+    const spoil = spoilers({ clock, upTo, deliver, held });
     const spares = !isInbound && inboundFaults.some((kind) => kind === fault);
     return (line) => {
       const hit = !healthy && !spares && line.length > 0 && upTo(9_999) < share * 10_000;
       if (hit) return spoil[fault === 'mixed' ? (mixable[upTo(mixable.length - 1)] as Exclude<LineFault, 'mixed'>) : fault](line);
       deliver(line);
-      release();
+      held.release();
     };
   }
 

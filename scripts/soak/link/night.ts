@@ -21,7 +21,7 @@ export const soakRig: RigMotion = {
 };
 export const crystal = { ratePpm: 18, uptimeS: 4321.5 };
 export const startUtcMs = 946_684_800_000;
-const SAMPLE_MS = 50;
+const SAMPLE_MS = 100;
 const HEALED_MS = 30_000;
 const END_MS = 62_000;
 
@@ -68,6 +68,7 @@ export async function runNight(situation: Situation, seed: number): Promise<Nigh
   const night = emptyNight(uptimeS);
   let onMove: () => void = () => undefined;
   const nowMs = () => clock.monotonicMs();
+  const sentOnce = new Set<number>();
   const controller: SimulatedController = createSimulatedController({
     ...{ clock, rig: soakRig, seed, ratePpm: crystal.ratePpm, uptimeS },
     tap: {
@@ -80,11 +81,12 @@ export async function runNight(situation: Situation, seed: number): Promise<Nigh
       sent: (line) => {
         const item = decodeLine(line.slice(0, -1));
         if (item.kind === 'reply') night.replies.push({ reply: item, atMs: nowMs() });
+        if (item.kind !== 'event') return;
+        if (item.what.word === 'boot') sentOnce.clear();
         // An event that is read again is the same event.
-        const isNew =
-          item.kind === 'event' && !night.did.some(({ event, atMs }) => event.number === item.number && atMs >= lastReset(night));
-        if (item.kind === 'event' && isNew)
-          night.did.push({ event: item, trueDeg: controller.trueAngleDegAt(clock.utcMs()), atMs: nowMs() });
+        if (sentOnce.has(item.number)) return;
+        sentOnce.add(item.number);
+        night.did.push({ event: item, trueDeg: controller.trueAngleDegAt(clock.utcMs()), atMs: nowMs() });
       },
     },
   });
@@ -115,10 +117,6 @@ export async function runNight(situation: Situation, seed: number): Promise<Nigh
 function emptyNight(uptimeS: number): Night {
   const lists = { issued: [], arrived: [], replies: [], did: [], told: [], samples: [], hazards: [], forbidden: [] };
   return { ...lists, slippedSteps: 0, uptimeS, condition: '' };
-}
-
-function lastReset({ hazards }: Night): number {
-  return hazards.findLast(({ kind }) => kind === 'reset')?.atMs ?? -Infinity;
 }
 
 function sample({ clock, controller, night }: Pick<Scene, 'clock' | 'controller' | 'night'>): void {
