@@ -3,6 +3,7 @@ import { createServer, type Socket } from 'node:net';
 import { parseArgs } from 'node:util';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { rigDocumentSchema, type RigMotion } from '@/shared/rig/document';
+import { createEmulatedController } from '../links/board/board-controller';
 import { createSimulatedController, type SimulatedController } from '../links/simulated-controller';
 import { RealClock } from './real-clock';
 
@@ -18,6 +19,7 @@ import { RealClock } from './real-clock';
 const usage = `Usage: controller [options]
   --rig FILE         rig document (JSON) with motion data; default: the demo rig
   --seed N           of boot identifier and noise; default: the time, so that each start has a boot identifier of its own
+  --board            the controller's firmware on the emulated board instead of the light simulated controller
   --homed            the position is known from the start; else it must be homed first
   --warned           the warning of 10 s before the first motion has been given
   --protocol N.N     version of the line protocol that it claims; default: its own
@@ -37,6 +39,7 @@ interface Options {
   homed: boolean;
   warned: boolean;
   version: { major: number; minor: number } | null;
+  board: boolean;
   babble: boolean;
   control: string | null;
 }
@@ -54,6 +57,7 @@ function optionsOf(args: string[]): Options {
     homed: values.homed ?? false,
     warned: values.warned ?? false,
     version: version ? { major: Number(version[1]), minor: Number(version[2]) } : null,
+    board: values.board ?? false,
     babble: values.babble ?? false,
     control: values.control ?? null,
   };
@@ -63,7 +67,8 @@ function parsed(args: string[]) {
   const text = { type: 'string' } as const;
   const flag = { type: 'boolean' } as const;
   try {
-    return parseArgs({ args, options: { rig: text, seed: text, homed: flag, warned: flag, protocol: text, babble: flag, control: text } });
+    const flags = { board: flag, homed: flag, warned: flag, babble: flag };
+    return parseArgs({ args, options: { ...flags, rig: text, seed: text, protocol: text, control: text } });
   } catch (error) {
     throw new Unusable(`${(error as Error).message}\n${usage}`);
   }
@@ -142,20 +147,16 @@ function listen(controller: SimulatedController, path: string): void {
 }
 
 async function main(): Promise<void> {
-  const { rig, version, control, babble: babbles, ...rest } = optionsOf(process.argv.slice(2));
+  const { rig, version, control, babble: babbles, board, ...rest } = optionsOf(process.argv.slice(2));
   // The other end hung up: there is nobody left to talk to.
   process.stdin.on('end', () => process.exit(0));
   process.stdout.on('error', () => process.exit(0));
   if (babbles) return babble();
   const clock = new RealClock();
-  const controller = createSimulatedController({
-    clock,
-    rig,
-    ...rest,
-    uptimeS: 0.5,
-    baudRate: endlessRate,
-    ...(version === null ? {} : { version }),
-  });
+  const light = { uptimeS: 0.5, baudRate: endlessRate, ...(version === null ? {} : { version }) };
+  const controller = board
+    ? createEmulatedController({ clock, rig, seed: rest.seed, homed: rest.homed })
+    : createSimulatedController({ clock, rig, ...rest, ...light });
   if (control !== null) listen(controller, control);
   await speak(controller);
 }
