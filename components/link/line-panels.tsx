@@ -10,7 +10,7 @@ export function HealthPanel({ line }: { line: LineMessage | null }) {
   // Ages go on while nothing arrives.
   useNow(1000);
   return (
-    <Section title="Health of the line">
+    <Section title="Health of the line in use">
       {line === null ? (
         <Loading label="Listening to the line" />
       ) : (

@@ -57,6 +57,7 @@ export function ResetPasswordScreen() {
           <Button kind="primary" size="action" label="Set the password" onPress={() => void submit()} busy={formState.isSubmitting} />
         </View>
       )}
+      {formState.errors.root === undefined ? null : <TextLink href="/forgotten-password" label="Ask for a new link" />}
       <TextLink href="/sign-in" label="To sign in" />
     </PublicPage>
   );

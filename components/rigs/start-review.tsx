@@ -102,7 +102,7 @@ function StartAct({ rig, choice, mayStart, stale }: StartActProps) {
         <Body tone="dim">
           {stale
             ? 'The checks are old: the server does not answer. Nothing can be started until it does.'
-            : 'Something above stands against a start. It may be started when every check passes.'}
+            : 'A check stands against this start. The run may be started when every check passes.'}
         </Body>
       )}
       <PressAndKeep

@@ -153,7 +153,7 @@ function Figures({ view, rows, result }: { view: RunView; rows: readonly StepRow
           <Label>mrad near − far</Label>
         </View>
       )}
-      {result?.period_s ? (
+      {result?.period_s && result.dwells.some(({ used }) => used) ? (
         <View>
           <UncertainText size={20} {...result.period_s} />
           <Label>s damped period</Label>

@@ -212,12 +212,9 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.taps('try-link');
     await hand.reads('try-result', 'There is no port /dev/pts/90210. Plug the controller in, or choose the path under which it appears.');
     await hand.shoots('no-port');
-    await hand.types('link-path', '/dev/ttyS0');
-    await hand.taps('try-link');
-    await hand.sees(/\/dev\/ttyS0 is not a pseudo-terminal\. This version opens pseudo-terminals and the simulated turntable only/);
     await hand.types('link-path', babble.path);
     await hand.taps('try-link');
-    await passUntil(() => hand.at('try-result').isVisible());
+    await passUntil(() => hand.at('try-result').filter({ hasText: 'Something talks' }).isVisible());
     await hand.reads('try-result', /Something talks at .*, but not the controller's language.*Check the port, the rate and the firmware\./);
     await hand.shoots('garbage-port');
     await hand.taps('save-link');

@@ -40,7 +40,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.goes(`/rigs/${demoIds.rig}/start?protocol=${protocol.protocolId}&revision=1`, 'start-screen');
     await hand.reads('check-armed', 'Nobody on site answers for the rig: arm it there first.');
     expect(await hand.isEnabled('start-run')).toBe(false);
-    await hand.sees('Something above stands against a start.');
+    await hand.sees('A check stands against this start.');
     await hand.shoots('start-not-armed');
   });
 

@@ -102,5 +102,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.page.getByLabel('New password').fill('a fibre that was cut twice');
     await hand.tapsOn('Set the password');
     await hand.sees(/link.*(used|not valid|unknown|expired|ended)/i);
+    await hand.tapsOn('Ask for a new link', 'link');
+    await hand.page.getByRole('button', { name: 'Send the link' }).waitFor();
   });
 });
