@@ -49,37 +49,77 @@ function offsetText(ms: number, uMs: number): string {
   return `${formatFixed(ms / 1000, { decimals, signed: true })}${NARROW_SPACE}s`;
 }
 
+const share = (ppm: number) => `${formatSignificant(ppm, 3, { signed: true })}${NARROW_SPACE}ppm`;
+
 /** Rows of the live health; `nowMs` by the server's clock. */
 export function healthRows({ health, controller }: Pick<LineMessage, 'health' | 'controller'>, nowMs: number): HealthRow[] {
-  const { lastReplyAt, roundTripMs, discardedLines, reconnects, clock } = health;
-  const ageS = lastReplyAt === null ? null : Math.max(0, (nowMs - Date.parse(lastReplyAt)) / 1000);
-  const slow = roundTripMs !== null && roundTripMs > slowRoundTripMs;
-  const rough = clock !== null && clock.uMs > roughClockMs;
   return [
     { label: 'State', ...conditions[health.condition], aside: health.detail === '' ? undefined : health.detail },
+    answerRow(health, nowMs),
+    roundTripRow(health),
+    ...lossRows(health),
+    ...clockRows(health),
     {
-      label: 'Last answer',
-      value: ageS === null ? 'none yet' : formatAgo(ageS),
-      state: ageS !== null && ageS <= 2 ? 'good' : 'bad',
-      advice: ageS === null || ageS > 2 ? 'A healthy line answers twice a second.' : '',
+      label: 'Firmware',
+      value: controller?.firmware ?? '–',
+      aside: health.protocol === null ? undefined : `line protocol ${health.protocol}`,
+      state: 'plain',
+      advice: '',
     },
+    { label: 'Boot identifier', value: controller?.bootId ?? '–', aside: 'changes with each restart', state: 'plain', advice: '' },
+  ];
+}
+
+function answerRow({ lastReplyAt }: LinkHealthView, nowMs: number): HealthRow {
+  const ageS = lastReplyAt === null ? null : Math.max(0, (nowMs - Date.parse(lastReplyAt)) / 1000);
+  const late = ageS === null || ageS > 2;
+  return {
+    label: 'Last answer',
+    value: ageS === null ? 'none yet' : formatAgo(ageS),
+    state: late ? 'bad' : 'good',
+    advice: late ? 'A healthy line answers twice a second.' : '',
+  };
+}
+
+function roundTripRow({ roundTripMs, roundTripP50Ms, roundTripP95Ms }: LinkHealthView): HealthRow {
+  const slow = (roundTripP95Ms ?? roundTripMs ?? 0) > slowRoundTripMs;
+  const most = roundTripP95Ms === null ? undefined : `19 of 20 within ${milliseconds(roundTripP95Ms)}`;
+  return {
+    label: 'Round trip',
+    value: roundTripP50Ms === null && roundTripMs === null ? '–' : milliseconds(roundTripP50Ms ?? roundTripMs ?? 0),
+    aside: most,
+    state: slow ? 'look' : 'plain',
+    advice: slow ? 'Slow: a serial server far away, or a busy computer. Times of motion stay right, hold and stop take longer.' : '',
+  };
+}
+
+function lossRows({ discardedLines, discardedBytes, droppedByController, retries, reconnects }: LinkHealthView): HealthRow[] {
+  const garbled = discardedLines > 0 || (droppedByController ?? 0) > 0;
+  return [
     {
-      label: 'Round trip',
-      value: roundTripMs === null ? '–' : milliseconds(roundTripMs),
-      state: slow ? 'look' : 'plain',
-      advice: slow ? 'Slow: a serial server far away, or a busy computer. Times of motion stay right, hold and stop take longer.' : '',
-    },
-    {
-      label: 'Lines set aside',
+      label: 'Set aside here',
       value: String(discardedLines),
-      aside: 'garbled on the way',
+      aside: discardedLines === 1 ? `line, ${discardedBytes} bytes` : `lines, ${discardedBytes} bytes`,
       state: discardedLines === 0 ? 'good' : 'look',
-      advice:
-        discardedLines === 0
-          ? ''
-          : 'None of them moved anything. If the number grows: another rate at the other end, a bad earth, or a cable too long beside the motor leads.',
+      advice: '',
     },
+    {
+      label: 'Dropped there',
+      value: droppedByController === null ? '–' : String(droppedByController),
+      aside: 'lines, by the controller',
+      state: droppedByController === null ? 'plain' : droppedByController === 0 ? 'good' : 'look',
+      advice: garbled
+        ? 'None of them moved anything. If the numbers grow: another rate at the other end, a bad earth, or a cable too long beside the motor leads.'
+        : '',
+    },
+    { label: 'Asked again', value: String(retries), aside: 'requests', state: 'plain', advice: '' },
     { label: 'Opened again', value: String(reconnects), aside: 'times', state: reconnects === 0 ? 'plain' : 'look', advice: '' },
+  ];
+}
+
+function clockRows({ clock, drift }: LinkHealthView): HealthRow[] {
+  const rough = clock !== null && clock.uMs > roughClockMs;
+  return [
     {
       label: 'Clock offset',
       value: clock === null ? '–' : offsetText(clock.offsetMs, clock.uMs),
@@ -87,8 +127,13 @@ export function healthRows({ health, controller }: Pick<LineMessage, 'health' | 
       state: rough ? 'look' : 'plain',
       advice: rough ? 'It becomes better by itself within a minute on a quiet line.' : '',
     },
-    { label: 'Firmware', value: controller?.firmware ?? '–', state: 'plain', advice: '' },
-    { label: 'Start of the controller', value: controller?.bootId ?? '–', aside: 'changes with each restart', state: 'plain', advice: '' },
+    {
+      label: 'Clock drift',
+      value: drift === null ? '–' : share(drift.ppm),
+      aside: drift === null ? 'known after half a minute' : `± ${formatSignificant(drift.uPpm, 2)}${NARROW_SPACE}ppm`,
+      state: 'plain',
+      advice: '',
+    },
   ];
 }
 

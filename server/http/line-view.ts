@@ -13,9 +13,16 @@ const healthOf = (health: LinkHealth): LinkHealthView => ({
   detail: health.detail,
   lastReplyAt: isoOrNull(health.lastReplyUtcMs),
   roundTripMs: health.roundTripMs,
+  roundTripP50Ms: health.roundTripP50Ms,
+  roundTripP95Ms: health.roundTripP95Ms,
   discardedLines: health.discardedLines,
+  discardedBytes: health.discardedBytes,
+  droppedByController: health.droppedByController,
+  retries: health.retries,
   reconnects: health.reconnects,
   clock: health.clockOffsetMs === null || health.clockUS === null ? null : { offsetMs: health.clockOffsetMs, uMs: health.clockUS * 1000 },
+  drift: health.driftPpm === null || health.driftUPpm === null ? null : { ppm: health.driftPpm, uPpm: health.driftUPpm },
+  protocol: health.protocol,
 });
 
 export const limitsViewOf = (limits: ControllerLimits): MotionLimits => ({

@@ -20,10 +20,22 @@ export const linkHealthSchema = z.strictObject({
   detail: z.string(),
   lastReplyAt: instantSchema.nullable(),
   roundTripMs: z.number().nullable(),
+  /** Of the last 100 answers. */
+  roundTripP50Ms: z.number().nullable(),
+  roundTripP95Ms: z.number().nullable(),
+  /** What came in and was no message. */
   discardedLines: z.number().int(),
+  discardedBytes: z.number().int(),
+  /** Lines that the controller dropped since it started; null before it told. */
+  droppedByController: z.number().int().nullable(),
+  retries: z.number().int(),
   reconnects: z.number().int(),
-  /** Controller's clock minus the server's, with standard uncertainties; null before the first exchange. */
+  /** Controller's clock minus the server's, with its standard uncertainty; null before the first exchange. */
   clock: z.strictObject({ offsetMs: z.number(), uMs: z.number() }).nullable(),
+  /** How much faster the controller's clock runs, with its standard uncertainty; null before there is a line to fit. */
+  drift: z.strictObject({ ppm: z.number(), uPpm: z.number() }).nullable(),
+  /** Version of the line protocol that the controller speaks. */
+  protocol: z.string().nullable(),
 });
 export type LinkHealthView = z.infer<typeof linkHealthSchema>;
 

@@ -45,7 +45,7 @@ async function nudges(steps: number): Promise<void> {
 
 tell('the line and the inputs are seen live', async () => {
   await hand.goes(`/rigs/${rigId}/link`, 'link-screen');
-  await hand.reads('line-health', /live.*Last answer.*(just now|1 s ago).*Round trip.*ms.*Lines set aside0.*Clock offset.*s ± .*Firmware/);
+  await hand.reads('line-health', /live.*Last answer.*(just now|1 s ago).*Round trip.*ms.*Set aside here0.*Clock offset.*s ± .*Firmware/);
   await hand.reads('line-inputs', /Arm key on: somebody is at the rig/);
   turntable().turnArmKey(false);
   await hand.reads('line-inputs', /Arm key off/);

@@ -39,11 +39,21 @@ const guided: GuidedView = {
   ...{ id: 'g-1', by: { id: 'u1', name: 'Ada Thornfield' }, since: at, present: true, whyNot: '', order: null },
   ...{ count: { number: 1, steps: 0 }, edges: [], longestNudgeSteps: 433 },
 };
+const figures = {
+  roundTripP50Ms: 2,
+  roundTripP95Ms: 3,
+  discardedBytes: 0,
+  droppedByController: 0,
+  retries: 0,
+  drift: null,
+  protocol: '1.0',
+};
 let beat = 0;
 const line = (change: object = {}): LineMessage =>
   ({
     ...{ serverAt: at, beat: (beat += 1), link: { kind: 'simulated' } },
     health: {
+      ...figures,
       condition: 'ready',
       detail: '',
       lastReplyAt: at,
