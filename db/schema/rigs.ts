@@ -93,6 +93,8 @@ export const arms = pgTable(
     armedById: key('armed_by_id')
       .notNull()
       .references(() => users.id),
+    /** Start of the controller for which the arm was given; an arm of before this column has none. */
+    bootId: text('boot_id'),
     endedAt: instant('ended_at'),
     endedWhy: text('ended_why'),
   },

@@ -26,7 +26,9 @@ export class MemoryArmKeeper implements ArmKeeper {
   /** Reads the arm of a rig that is taken up. */
   async load(rig: { labId: string; rigId: string }): Promise<void> {
     const arm = await currentArm(this.parts.database.db, { ...rig, nowUtcMs: this.parts.clock.utcMs() });
-    if (arm !== null) this.set(rig.rigId, { id: arm.id, name: arm.name, note: arm.note, fromUtcMs: arm.fromAt, untilUtcMs: arm.untilAt });
+    if (arm === null) return;
+    const { id, name, note, fromAt: fromUtcMs, untilAt: untilUtcMs, bootId } = arm;
+    this.set(rig.rigId, { id, name, note, fromUtcMs, untilUtcMs, bootId });
   }
 
   armOf(rigId: string): StandingArm | null {

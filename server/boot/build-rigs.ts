@@ -85,7 +85,7 @@ export function buildRigSide(
   /** Whatever lets people or surprises into the room, or loses the position, ends the arm, run or no run. */
   function heedLink(station: RigStation, event: LinkEvent): void {
     const wasKnown = known.get(station.rigId) ?? false;
-    const why = endOfArm(event, wasKnown);
+    const why = endOfArm(event, { wasKnown, armedBootId: arms.armOf(station.rigId)?.bootId ?? null });
     known.set(station.rigId, knownAfter(event, wasKnown));
     if (why !== null) arms.end(station, why, engineItself);
     if (event.kind === 'clock-stepped') log.warn({ rigId: station.rigId, clock: event.clock, byMs: event.byMs }, 'a clock stepped');

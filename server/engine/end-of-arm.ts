@@ -3,9 +3,9 @@ import type { LinkEvent } from '../interfaces/turntable-link';
 /**
  * Why what the controller says ends the arm of its rig, run or no run; null where it does not. Whatever lets people or surprises into the
  * room does, and so does the loss of the position: homing after it needs a person at the rig and a new arm.
- * @param wasKnown whether the position was known before this event
+ * @param before whether the position was known before this event, and for which start of the controller the rig was armed (null: not known)
  */
-export function endOfArm(event: LinkEvent, wasKnown: boolean): string | null {
+export function endOfArm(event: LinkEvent, { wasKnown, armedBootId }: { wasKnown: boolean; armedBootId: string | null }): string | null {
   switch (event.kind) {
     case 'interlock':
       return event.closed ? null : 'the interlock was opened';
@@ -17,6 +17,8 @@ export function endOfArm(event: LinkEvent, wasKnown: boolean): string | null {
       return wasKnown && event.angleDeg === null ? positionLost : null;
     case 'ready': {
       const { controller } = event;
+      // It may have restarted while the server was away, and nobody told.
+      if (armedBootId !== null && armedBootId !== controller.bootId) return 'the controller restarted';
       if (!controller.interlockClosed) return 'the interlock is open';
       if (!controller.supplyPresent) return 'the motor supply is off';
       return wasKnown && !controller.positionKnown ? positionLost : null;

@@ -5,6 +5,8 @@ export interface StandingArm {
   note: string;
   fromUtcMs: number;
   untilUtcMs: number;
+  /** Start of the controller for which it was given; null: not known. */
+  bootId: string | null;
 }
 
 /** Arms in memory, so that the engine can ask at any instant; the database holds the same. */

@@ -12,7 +12,16 @@ const unended = (labId: string, rigId: string) => and(eq(arms.labId, labId), eq(
 /** Arms a rig until an instant at most 72 h ahead; an arm that still stood is ended by the new one. */
 export async function armRig(
   tx: Transaction,
-  arm: { labId: string; rigId: string; name: string; note: string; armedById: string; nowUtcMs: number; untilUtcMs: number },
+  arm: {
+    labId: string;
+    rigId: string;
+    name: string;
+    note: string;
+    armedById: string;
+    bootId: string;
+    nowUtcMs: number;
+    untilUtcMs: number;
+  },
 ): Promise<Arm> {
   const { nowUtcMs, untilUtcMs, ...fields } = arm;
   await tx.update(arms).set({ endedAt: nowUtcMs, endedWhy: 'armed anew' }).where(unended(arm.labId, arm.rigId));

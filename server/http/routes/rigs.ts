@@ -164,10 +164,11 @@ const armRoutes = [
     if (!controller.supplyPresent)
       throw new ProblemError('not-ready', `The motor supply of ${rig.name} is off. Switch it on at the rig, then arm.`);
     const entry = { kind: 'rig.armed', data: () => ({ rigId: rig.id, name: body.name, until: body.until }) };
-    const stored = await audited(context, entry, (tx) =>
-      armRig(tx, { labId: rig.labId, rigId: rig.id, name: body.name, note: body.note, armedById: me.userId, nowUtcMs, untilUtcMs }),
-    );
-    const arm = { id: stored.id, name: stored.name, note: stored.note, fromUtcMs: stored.fromAt, untilUtcMs: stored.untilAt };
+    const { bootId } = controller;
+    const given = { name: body.name, note: body.note, armedById: me.userId, bootId, nowUtcMs, untilUtcMs };
+    const stored = await audited(context, entry, (tx) => armRig(tx, { labId: rig.labId, rigId: rig.id, ...given }));
+    const { id, name, note, fromAt, untilAt } = stored;
+    const arm = { id, name, note, fromUtcMs: fromAt, untilUtcMs: untilAt, bootId };
     services.arms.set(rig.id, arm);
     return armViewOf(arm);
   }),

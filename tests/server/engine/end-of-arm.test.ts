@@ -31,11 +31,13 @@ describe('what ends the arm of a rig, run or no run', () => {
     ['the interlock was opened', { kind: 'interlock', at, closed: false }],
     ['the position was lost', { kind: 'standstill', at, commandId: 'stop-1', angleDeg: null }],
     ['the position was lost', ready(lost)],
-  ])('%s', (why, event) => expect(endOfArm(event, true)).toBe(why));
+    ['the controller restarted', ready({ bootId: 'boot-2' })],
+  ])('%s', (why, event) => expect(endOfArm(event, { wasKnown: true, armedBootId: 'boot-1' })).toBe(why));
 
   test('a rig that was never homed may be armed for homing, and the arm outlives a short gap of the line', () => {
-    expect(endOfArm(ready(lost), false)).toBeNull();
-    expect(endOfArm(ready(), true)).toBeNull();
+    expect(endOfArm(ready(lost), { wasKnown: false, armedBootId: 'boot-1' })).toBeNull();
+    expect(endOfArm(ready(), { wasKnown: true, armedBootId: 'boot-1' })).toBeNull();
+    expect(endOfArm(ready({ bootId: 'boot-2' }), { wasKnown: true, armedBootId: null })).toBeNull();
   });
 
   test('the position is known from homing until it is lost', () => {

@@ -99,7 +99,9 @@ describe('arms', () => {
     return { labId: lab.id, rigId: await makeRig(db(), lab.id), armedById: (await makeUser(db())).id };
   }
   const arm = (where: Awaited<ReturnType<typeof rig>>, name: string, hours: number) =>
-    db().transaction((tx) => armRig(tx, { ...where, name, note: '', nowUtcMs: eveningUtcMs, untilUtcMs: eveningUtcMs + hours * hourMs }));
+    db().transaction((tx) =>
+      armRig(tx, { ...where, name, note: '', bootId: '00001A2B', nowUtcMs: eveningUtcMs, untilUtcMs: eveningUtcMs + hours * hourMs }),
+    );
 
   test('an arm holds until its end and no longer', async () => {
     const where = await rig();

@@ -1,0 +1,1 @@
+ALTER TABLE "arms" ADD COLUMN "boot_id" text;
