@@ -98,6 +98,12 @@ export const fails = (code: string, text: string) => ({
   actions: act((draft) => void draft.because(code, text)),
 });
 
+/** What became of a motion is not known, as on a line that loses most answers: it is brought to rest, and a person may resume. */
+export const holdsFor = (code: string, text: string) => ({
+  target: 'holding' as const,
+  actions: act((draft) => void draft.because(code, text), beginHold),
+});
+
 export const isMine = ({ context, event }: Told) =>
   'link' in event && 'commandId' in event.link && event.link.commandId === context.run.step?.motion?.commandId;
 export const isAhead = ({ context, event }: Told) =>
@@ -153,7 +159,7 @@ export const explainNoReturn: Writer = (draft) => {
   if (why !== null) draft.because(draft.context.interruption?.cause ?? 'held', `${draft.context.reason?.text ?? ''} ${why}`.trim());
 };
 
-/** A refused motion: the interlock or supply is an incident, a passing refusal is tried again, any other fails the run. */
+/** A refused motion: the interlock or supply is an incident, a passing refusal is tried again and in the end held, any other fails the run. */
 export const refusals = (isFor: (told: Told) => boolean, again: Writer) => [
   ...guarded(refusedFor(isFor, 'interlock'), gravely(noteRefusal, graveOf('interlock'))),
   ...guarded(refusedFor(isFor, 'supply'), gravely(noteRefusal, graveOf('supply'))),
@@ -161,6 +167,7 @@ export const refusals = (isFor: (told: Told) => boolean, again: Writer) => [
     guard: (told: Told) => refusedFor(isFor, ...passing)(told) && told.context.run.moveRetries < MOST_RETRIES,
     actions: act(noteRefusal, again),
   },
+  { guard: refusedFor(isFor, ...passing), target: 'holding' as const, actions: act(noteRefusal, explainRefusal, beginHold) },
   { guard: isFor, target: 'failed' as const, actions: act(noteRefusal, explainRefusal) },
   { actions: act(noteRefusal) },
 ];

@@ -36,6 +36,7 @@ import {
   fails,
   heard,
   isAhead,
+  holdsFor,
   isCancelled,
   isMine,
   isOver,
@@ -119,7 +120,7 @@ const machine = chart.createMachine({
         'link.motion-began': [{ guard: isMine, actions: act(noteBegan, expectEnd) }, strangeMotion],
         'link.motion-ended': motionEnds,
         'link.refused': refusals(isMine, askAgain),
-        deadline: fails('no-answer', 'The move was sent, and the controller never said that it ended.'),
+        deadline: holdsFor('no-answer', 'The move was sent, and the controller never said that it ended.'),
       },
     },
     standing: {
@@ -133,7 +134,7 @@ const machine = chart.createMachine({
         'link.motion-ended': { guard: isAhead, actions: act(dropAhead) },
         'link.refused': refusals(isAhead, dropAhead),
         deadline: [
-          { guard: isOverdue, ...fails('no-answer', 'The controller accepted the move and never began it.') },
+          { guard: isOverdue, ...holdsFor('no-answer', 'The controller accepted the move and never told that it began.') },
           { guard: isOver, target: 'choosing', actions: act(endStanding, chooseNext) },
           { actions: act(sendAhead) },
         ],

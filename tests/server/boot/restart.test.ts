@@ -140,3 +140,26 @@ test('the worker thread gives the same rehearsal as the thread of the tests', as
   expect(here.total).toBeGreaterThan(500);
   expect(there).toEqual(here);
 });
+
+describe('an arm', () => {
+  const armOf = async () => (await lab.as('viewer', 'GET', `/labs/${demoIds.lab}/rigs/${demoIds.rig}`)).body.arm as { name: string } | null;
+
+  test('outlives a restart of the server while the controller goes on', async () => {
+    await lab.arm();
+    await restart(8_000);
+    await lab.advance(3_000);
+    expect(await armOf()).not.toBeNull();
+  });
+
+  test('does not outlive a restart of the controller that no server heard', async () => {
+    await lab.arm();
+    const { world } = lab;
+    await lab.stop();
+    world.controller(demoIds.rig).reset();
+    await world.clock.advance(8_000);
+    lab = await LabServer.start(database(), { world });
+    await lab.advance(3_000);
+    expect(lab.station().link.health().condition).toBe('ready');
+    expect(await armOf()).toBeNull();
+  });
+});
