@@ -20,6 +20,8 @@ const BITS_PER_BYTE = 10;
 const CONNECT_DEADLINE_MS = 5_000;
 const AGREEMENT_DEADLINE_MS = 3_000;
 const KEEP_ALIVE_MS = 2_000;
+/** A server that cannot open its own port says so and hangs up within a moment of the connection (an estimate, no source). */
+const MOMENT_MS = 100;
 /** Of what came last, so many bytes are kept for the words that a serial server says before it hangs up. */
 const KEPT_BYTES = 200;
 
@@ -37,7 +39,7 @@ export function tcpFactory(settings: TcpSettings, clock: Clock): ByteLineFactory
     open: async (handlers) => {
       const socket = await connected(settings, description, clock);
       const talk = new TcpTalk({ settings, description, clock, socket, handlers });
-      return settings.mode === 'raw' ? talk.line : talk.agreed();
+      return talk.opened();
     },
   };
 }
@@ -95,7 +97,7 @@ class TcpTalk {
   private readonly reader = new TelnetReader();
   private readonly agreement: ComPortAgreement;
   private last = '';
-  private settle: (error?: Error) => void = () => undefined;
+  private settle: (error?: LineError) => void = () => undefined;
 
   constructor(private readonly parts: TalkParts) {
     const { settings, socket, handlers, clock } = parts;
@@ -107,21 +109,27 @@ class TcpTalk {
     socket.on('close', () => this.end(this.farewell()));
   }
 
-  /** Resolves when the server has acknowledged the rate and the form of the bytes. */
-  agreed(): Promise<ByteLine> {
-    const { clock, socket, description } = this.parts;
+  /** Resolves when the server has acknowledged the rate and the form of the bytes or, raw, has not hung up at once. */
+  opened(): Promise<ByteLine> {
+    const { clock, socket, settings } = this.parts;
+    const isRaw = settings.mode === 'raw';
     return new Promise((done, failed) => {
-      const giveUp = () => this.settle(new Error('it does not answer as RFC 2217 asks for; choose raw, or switch RFC 2217 on there'));
-      const cancel = clock.after(AGREEMENT_DEADLINE_MS, giveUp);
+      const cancel = clock.after(isRaw ? MOMENT_MS : AGREEMENT_DEADLINE_MS, () =>
+        this.settle(isRaw ? undefined : this.unusable('it does not answer as RFC 2217 asks for; choose raw, or switch RFC 2217 on there')),
+      );
       this.settle = (error) => {
         cancel();
         this.settle = () => undefined;
         if (error === undefined) return done(this.line);
         void this.line.close();
-        failed(new LineError('other-mode', `The serial server at ${description} cannot be used: ${error.message}.`));
+        failed(error);
       };
-      socket.write(this.agreement.opening());
+      if (!isRaw) socket.write(this.agreement.opening());
     });
+  }
+
+  private unusable(why: string): LineError {
+    return new LineError('other-mode', `The serial server at ${this.parts.description} cannot be used: ${why}.`);
   }
 
   private take(chunk: Buffer): void {
@@ -134,8 +142,9 @@ class TcpTalk {
       }
       if (this.agreement.isComplete) this.settle();
     } catch (error) {
-      this.settle(error as Error);
-      this.line.end((error as Error).message);
+      const { message } = this.unusable((error as Error).message);
+      this.settle(new LineError('other-mode', message));
+      this.line.end(message);
     }
     if (data.length > 0) this.pass(data);
   }
@@ -147,7 +156,7 @@ class TcpTalk {
   }
 
   private end(why: string): void {
-    this.settle(new Error(why));
+    this.settle(new LineError('unreachable', why));
     this.line.end(why);
   }
 
@@ -180,7 +189,8 @@ class SocketStream implements ByteStream {
   }
 
   write(bytes: Buffer, taken: (error?: Error | null) => void): void {
-    this.socket.write(this.escapes ? escaped(bytes) : bytes, taken);
+    // A socket that cannot write closes, and its closing says why in better words.
+    this.socket.write(this.escapes ? escaped(bytes) : bytes, () => taken());
   }
 
   async close(): Promise<void> {
