@@ -59,7 +59,7 @@ function Slipped({ position, timeZone }: { position: PositionView; timeZone: str
 
 function Fact({ label, children, danger = false, testID }: { label: string; children: string; danger?: boolean; testID?: string }) {
   return (
-    <View className="min-w-[130px]">
+    <View className="max-w-full min-w-[130px]">
       <Label>{label}</Label>
       <Num size={15} tone={danger ? 'danger' : 'text'} {...(testID === undefined ? {} : { testID })}>
         {children}

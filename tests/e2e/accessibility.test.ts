@@ -95,6 +95,8 @@ async function visit(hand: Hand, { path, arrives, first }: Place): Promise<void>
   const sheet = hand.page.locator('dialog [data-testid="sheet-close"]');
   if (hand.page.url().endsWith(path) && (await sheet.isVisible())) await hand.taps(sheet);
   else await hand.page.goto(path);
+  // The sign-in page stands as plain HTML first, and its program draws it anew.
+  await hand.page.locator('#root:not([data-early])').waitFor();
   await (arrives === '' ? hand.page.getByRole('heading', { level: 1 }) : hand.at(arrives)).first().waitFor();
   await first?.(hand);
 }
