@@ -143,13 +143,14 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await lab().close(hand.browser);
   });
 
-  test(`axe finds nothing serious on any screen in any theme${size === 'phone' ? ', and at 320 px nothing leads sideways' : ''}`, async () => {
+  test(`axe finds nothing serious on any screen${size === 'phone' ? ' in any theme, and at 320 px nothing leads sideways' : ''}`, async () => {
     const found: Record<string, string[]> = {};
     for (const place of [...publicPlaces, ...places()]) {
       if (place.name === 'rigs') await lab().enter(hand.browser, 'owner');
       await visit(hand, place);
       const all = size === 'phone' ? await narrow(hand, place) : [];
-      for (const theme of themes) all.push(...(await findings(hand, theme)));
+      // Colours do not depend on the size: the phone sees all themes, the wide screen the dark one.
+      for (const theme of size === 'phone' ? themes : (['dark'] as const)) all.push(...(await findings(hand, theme)));
       if (all.length > 0) found[place.name] = all;
     }
     expect(found).toEqual({});
