@@ -19,8 +19,6 @@ await ensureNodeModules();
 await ensureDebianPackages(['postgresql', 'chromium', 'socat', 'ser2net', 'g++', 'gcc-avr', 'avr-libc']);
 const output = join(root, 'test-output');
 mkdirSync(output, { recursive: true });
-const report = join(output, 'jest.json');
-rmSync(report, { force: true });
 
 let code = whole ? await pass(process.execPath, [join(root, 'scripts', 'check.mjs')], { cwd: root }) : 0;
 if (code === 0) {
@@ -33,20 +31,29 @@ if (code === 0) {
       [join(root, 'node_modules', 'jest', 'bin', 'jest.js'), '--testTimeout=30000', '--json', `--outputFile=${report}`, ...more],
       { cwd: root, env },
     );
-  code = await jest(args, report);
-  const first = JSON.parse(readFileSync(report, 'utf8'));
-  const failed = first.testResults.filter(({ status }) => status === 'failed').map(({ name }) => name);
-  let stillFailed = first.numFailedTests;
+  const [inBrowser, other] = [join(output, 'jest-browser.json'), join(output, 'jest.json')];
+  for (const report of [inBrowser, other]) rmSync(report, { force: true });
+  // The browser's tests wait for the browser most of the time: the others run beside them, each in one row of their own.
+  const codes = await Promise.all(
+    whole
+      ? [jest(['--selectProjects', 'e2e', '-i'], inBrowser), jest(['--selectProjects', 'node', 'web', '-i'], other)]
+      : [jest(args, other)],
+  );
+  code = Math.max(...codes);
+  const first = (whole ? [inBrowser, other] : [other]).map((report) => JSON.parse(readFileSync(report, 'utf8')));
+  const sum = (key) => first.reduce((all, report) => all + report[key], 0);
+  const failed = first.flatMap(({ testResults }) => testResults.filter(({ status }) => status === 'failed').map(({ name }) => name));
+  let stillFailed = sum('numFailedTests');
   if (whole && failed.length > 0 && failed.every((name) => inRealTime.test(name))) {
     say(`Second try, alone, for what runs in real time and may starve on a busy machine:\n  ${failed.join('\n  ')}`);
     const again = join(output, 'jest-again.json');
-    code = await jest(['--runTestsByPath', ...failed], again);
+    code = await jest(['-i', '--runTestsByPath', ...failed], again);
     stillFailed = JSON.parse(readFileSync(again, 'utf8')).numFailedTests;
   }
   if (!cluster.wasRunning) await cluster.stop();
   say(`${((Date.now() - start) / 1000).toFixed(0)} s in all`);
   process.stdout.write(
-    `${first.numTotalTests - stillFailed - first.numPendingTests} passed, ${stillFailed} failed, ${first.numPendingTests} skipped\n`,
+    `${sum('numTotalTests') - stillFailed - sum('numPendingTests')} passed, ${stillFailed} failed, ${sum('numPendingTests')} skipped\n`,
   );
 }
 process.exit(code);
