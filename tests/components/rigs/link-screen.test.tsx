@@ -1,4 +1,4 @@
-import { fireEvent, screen } from '@testing-library/react';
+import { fireEvent, screen, waitFor } from '@testing-library/react';
 import { useSession } from '@/components/api';
 import { LinkScreen } from '@/components/rigs/link-screen';
 import type { Role } from '@/shared/contracts/roles';
@@ -99,8 +99,7 @@ test('a port of the server is chosen with a tap, under the name that stays and w
   lab.on('GET /labs/lab-1/serial-ports', () => ({ body: { items: ports } }));
   lab.on('POST /labs/lab-1/rigs/rig-1/link/try', () => ({ body: { ok: true, detail: 'A controller answers.', firmware: 'evenfall-0.1' } }));
   fireEvent.click(screen.getByText('Serial line'));
-  await settled();
-  expect(screen.getByTestId('port-list').textContent).toContain('A board · USB 75330 · free');
+  await waitFor(() => expect(screen.getByTestId('port-list').textContent).toContain('A board · USB 75330 · free'));
   fireEvent.click(screen.getByTestId('port-/dev/ttyACM0'));
   expect(screen.getByTestId('link-path')).toHaveProperty('value', stablePath);
   fireEvent.click(screen.getByTestId('try-link'));
