@@ -9,6 +9,8 @@ import type { Connection } from '../store/database';
 
 export interface BuildParts {
   database: Connection;
+  /** Connections of the engine's own, so that no crowd of pages stands before a step, a lease or an arm; default `database`. */
+  engineDatabase?: Connection;
   clock: Clock;
   config: ServerConfig;
   overrides?: BuildOverrides;

@@ -32,7 +32,7 @@ export function buildRigSide(
   parts: BuildParts,
   { log, background, samples, onLine }: { log: Logger; background: Background; samples: SampleStore; onLine(rigId: string): void },
 ): RigSide {
-  const { database, clock, overrides = {} } = parts;
+  const { engineDatabase: database = parts.database, clock, overrides = {} } = parts;
   const arms = new MemoryArmKeeper({ database, clock, log, sha256: sha256Hex, background: (work, what) => background.add(work, what) });
   const leases = new LeaseKeeper({
     database,

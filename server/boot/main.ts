@@ -30,6 +30,7 @@ async function main(): Promise<void> {
   const config = configuration();
   const clock = new RealClock();
   const database = connect({ url: config.databaseUrl, maxConnections: 20 });
+  const engineDatabase = connect({ url: config.databaseUrl, maxConnections: 4 });
   await migrateToLatest(database);
   if (config.demo && (await seedDemo(database, { nowUtcMs: clock.utcMs(), hashPassword, sha256: sha256Hex }))) {
     await queueDemoRehearsal(database, clock.utcMs());
@@ -37,14 +38,20 @@ async function main(): Promise<void> {
   const mailbox = config.demo && config.smtpUrl === null ? await startDemoMailbox({ folder: join(config.stateDir, 'mail'), clock }) : null;
   const smtpUrl = config.smtpUrl ?? mailbox?.url ?? null;
   const mail = smtpUrl === null ? null : createSmtpMail({ url: smtpUrl, from: config.mailFrom });
-  const server = buildServer({ database, clock, config, overrides: mail === null ? {} : { mail } });
+  const server = buildServer({ database, engineDatabase, clock, config, overrides: mail === null ? {} : { mail } });
 
   let ending = false;
   const end = () => {
     if (ending) return;
     ending = true;
     setTimeout(() => process.exit(0), longestEndMs).unref();
-    void endAll([() => server.stop(), () => mailbox?.close(), () => mail?.close(), () => database.close()]).then(() => process.exit(0));
+    void endAll([
+      () => server.stop(),
+      () => mailbox?.close(),
+      () => mail?.close(),
+      () => engineDatabase.close(),
+      () => database.close(),
+    ]).then(() => process.exit(0));
   };
   process.on('SIGINT', end);
   process.on('SIGTERM', end);

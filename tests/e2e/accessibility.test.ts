@@ -1,4 +1,5 @@
-import { AxeBuilder } from '@axe-core/playwright';
+import type { AxeResults, run } from 'axe-core';
+import { readFileSync } from 'node:fs';
 import { demoIds } from '@/db/demo/seed';
 import { sizes, type Size } from '../support/browser';
 import { Hand, until } from './support/hand';
@@ -8,6 +9,7 @@ import { finishedNight, issued, read, shortNight, started } from './support/nigh
 /** Every screen by axe in the three themes, targets a thumb can meet, and pages that fit the narrowest phone. */
 
 jest.setTimeout(240_000);
+const axeSource = readFileSync(require.resolve('axe-core/axe.min.js'), 'utf8');
 const lab = labOfThisFile();
 const themes = ['dark', 'light', 'red'] as const;
 
@@ -91,12 +93,21 @@ function places(): Place[] {
   ];
 }
 
+/** From page to page of the program as its own links lead, without loading it anew. */
+const leads = (path: string) => {
+  history.pushState({}, '', path);
+  window.dispatchEvent(new PopStateEvent('popstate', { state: {} }));
+};
+
 async function visit(hand: Hand, { path, arrives, first }: Place): Promise<void> {
   const sheet = hand.page.locator('dialog [data-testid="sheet-close"]');
   if (hand.page.url().endsWith(path) && (await sheet.isVisible())) await hand.taps(sheet);
+  else if (await hand.page.locator('nav').first().isVisible()) await hand.page.evaluate(leads, path);
   else await hand.page.goto(path);
   // The sign-in page stands as plain HTML first, and its program draws it anew.
-  await hand.page.locator('#root:not([data-early])').waitFor();
+  await hand.page.waitForFunction(() =>
+    Object.keys(document.querySelector('main, [role=main]') ?? {}).some((key) => key.startsWith('__react')),
+  );
   await (arrives === '' ? hand.page.getByRole('heading', { level: 1 }) : hand.at(arrives)).first().waitFor();
   await first?.(hand);
 }
@@ -122,10 +133,17 @@ async function findings(hand: Hand, theme: (typeof themes)[number]): Promise<str
     page.className = page.className.replace(/theme-\w+/g, '');
     page.classList.add(`theme-${name}`);
   }, theme);
-  const axe = new AxeBuilder({ page: hand.page }).setLegacyMode(true).options({ resultTypes: ['violations'] });
+  if (!(await hand.page.evaluate(() => 'axe' in window))) await hand.page.evaluate(axeSource);
   // What lies under a sheet cannot be reached, and is looked at on its own.
-  if (await hand.page.locator('dialog').first().isVisible()) axe.include('dialog');
-  const { violations } = await (theme === 'dark' ? axe : axe.withRules(['color-contrast'])).analyze();
+  const under = (await hand.page.locator('dialog').first().isVisible()) ? 'dialog' : 'html';
+  const { violations } = await hand.page.evaluate(
+    ([place, rules]): Promise<AxeResults> =>
+      (window as unknown as { axe: { run: typeof run } }).axe.run(place, {
+        resultTypes: ['violations'],
+        ...(rules === null ? {} : { runOnly: { type: 'rule', values: rules } }),
+      }),
+    [under, theme === 'dark' ? null : ['color-contrast']] as const,
+  );
   return violations
     .filter(({ impact }) => impact === 'serious' || impact === 'critical')
     .flatMap(({ id, nodes }) =>

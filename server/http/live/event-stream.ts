@@ -12,6 +12,8 @@ export function encodeEvent(event: string, data: unknown, id: number | null): st
 /** One open stream of server-sent events (HTML Living Standard, 9.2). */
 export class EventStream {
   constructor(private readonly res: Response) {
+    // The end of the stream is the end of the line: no message needs a frame of its own around it.
+    res.removeHeader('Transfer-Encoding');
     res.status(200).set({ 'Content-Type': 'text/event-stream; charset=utf-8', 'Cache-Control': 'no-store', 'X-Accel-Buffering': 'no' });
     res.flushHeaders();
   }

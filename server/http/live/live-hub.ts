@@ -5,6 +5,7 @@ import type { Cancel, Clock } from '@/server/interfaces/clock';
 import { ProblemError } from '../problem-error';
 import type { SignedIn } from '../route-context';
 import { encodeEvent, EventStream } from './event-stream';
+import { RecentChanges } from './recent-changes';
 
 export interface LiveRunKey {
   labId: string;
@@ -32,6 +33,11 @@ export interface LiveSource {
   mayStillRead(reader: SignedIn, labId: string): Promise<boolean>;
 }
 
+interface Snapshot {
+  lastSeq: number;
+  encoded: Buffer;
+}
+
 interface Reader {
   run: LiveRunKey;
   me: SignedIn;
@@ -54,6 +60,9 @@ export class LiveHub {
   private readonly readers = new Set<Reader>();
   /** Since the last beat, by rig. */
   private readonly samples = new Map<string, LiveSamples[]>();
+  private readonly recent = new RecentChanges();
+  /** By run, what the next reader is shown first; until something changes, or the next beat. */
+  private readonly snapshots = new Map<string, Promise<Snapshot | null>>();
   private beats = 0;
   private cancelBeat: Cancel | null = null;
 
@@ -87,6 +96,8 @@ export class LiveHub {
 
   /** Sends what was just saved to everybody who follows the run. */
   changed(runId: string, change: LiveChange): void {
+    this.recent.add(runId, change);
+    this.snapshots.delete(runId);
     const whole = once(() => Buffer.from(encodeChange(change)));
     for (const reader of this.readers) {
       if (reader.run.runId !== runId) continue;
@@ -116,32 +127,49 @@ export class LiveHub {
   }
 
   private async fill(reader: Reader, lastEventId: number | null): Promise<void> {
-    const { source } = this.parts;
-    const view = await source.view(reader.run);
-    if (view === null) {
+    const snapshot = await this.snapshotOf(reader.run);
+    if (snapshot === null) {
       this.end(reader);
       return;
     }
-    if (lastEventId !== null && lastEventId <= view.lastSeq) await this.fillGap(reader, lastEventId);
-    reader.stream.send(encodeEvent('snapshot', view, view.lastSeq));
-    // With the snapshot comes the server's time: how long a step still takes must not wait for the next second to be right.
-    reader.stream.send(this.encodedBeat(reader.run));
-    reader.sentSeq = Math.max(lastEventId !== null && lastEventId > view.lastSeq ? 0 : reader.sentSeq, view.lastSeq);
+    const { lastSeq, encoded } = snapshot;
+    if (lastEventId !== null && lastEventId <= lastSeq) await this.fillGap(reader, { afterSeq: lastEventId, lastSeq });
+    reader.stream.send(encoded);
+    reader.sentSeq = Math.max(lastEventId !== null && lastEventId > lastSeq ? 0 : reader.sentSeq, lastSeq);
     const waiting = reader.waiting ?? [];
     reader.waiting = null;
     for (const change of waiting) sendChange(reader, change);
   }
 
+  /** The view of a run and, with it, the server's time: how long a step still takes must not wait for the next second to be right. */
+  private snapshotOf(run: LiveRunKey): Promise<Snapshot | null> {
+    const known = this.snapshots.get(run.runId);
+    if (known !== undefined) return known;
+    const made = this.madeSnapshot(run);
+    this.snapshots.set(run.runId, made);
+    made.catch(() => this.snapshots.delete(run.runId));
+    return made;
+  }
+
+  private async madeSnapshot(run: LiveRunKey): Promise<Snapshot | null> {
+    const view = await this.parts.source.view(run);
+    if (view === null) return null;
+    const { lastSeq } = view;
+    return { lastSeq, encoded: Buffer.from(encodeEvent('snapshot', view, lastSeq) + this.encodedBeat(run)) };
+  }
+
   /** Events, then the rows of the step log they speak of: the page may have seen these rows unfinished. */
-  private async fillGap(reader: Reader, afterSeq: number): Promise<void> {
+  private async fillGap(reader: Reader, gap: { afterSeq: number; lastSeq: number }): Promise<void> {
+    const kept = this.recent.between(reader.run.runId, gap);
+    if (kept !== null) {
+      for (const change of kept) sendGap(reader, change);
+      return;
+    }
     const { source } = this.parts;
-    const events = await source.events(reader.run, { afterSeq, limit: longestGap + 1 });
+    const events = await source.events(reader.run, { afterSeq: gap.afterSeq, limit: longestGap + 1 });
     if (events.length > longestGap) return;
-    for (const event of events) reader.stream.send(encodeEvent('event', event, event.seq));
-    reader.sentSeq = events.at(-1)?.seq ?? afterSeq;
     const touched = new Set(events.map((event) => event.data.seq).filter((seq) => typeof seq === 'number'));
-    if (touched.size === 0) return;
-    for (const step of await source.steps(reader.run, [...touched])) reader.stream.send(encodeEvent('step', step, null));
+    sendGap(reader, { events, steps: touched.size === 0 ? [] : await source.steps(reader.run, [...touched]) });
   }
 
   private keepBeating(): void {
@@ -155,6 +183,7 @@ export class LiveHub {
 
   private beat(): void {
     this.beats += 1;
+    this.snapshots.clear();
     const texts = new Map<string, Buffer>();
     for (const reader of this.readers) {
       const text = texts.get(reader.run.runId) ?? this.beatOf(reader.run);
@@ -202,6 +231,12 @@ function sendChange(reader: Reader, change: LiveChange, whole = () => Buffer.fro
   const snapshotIsNews = view.lastSeq >= reader.sentSeq;
   if (fresh.length === events.length && snapshotIsNews) reader.stream.send(whole());
   else reader.stream.send(encodeChange({ events: fresh, steps, view: snapshotIsNews ? view : null }));
+}
+
+/** What came while the page was away. */
+function sendGap(reader: Reader, { events, steps }: Omit<LiveChange, 'view'>): void {
+  reader.stream.send(encodeChange({ events, steps, view: null }));
+  reader.sentSeq = events.at(-1)?.seq ?? reader.sentSeq;
 }
 
 function encodeChange({ events, steps, view }: Omit<LiveChange, 'view'> & { view: RunView | null }): string {
