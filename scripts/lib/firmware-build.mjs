@@ -6,6 +6,10 @@ import { must } from './run.mjs';
 
 export const firmwareFolder = join(root, 'firmware-protocol', 'firmware');
 export const boardImage = join(firmwareFolder, 'evenfall.hex');
+/** Where the image keeps its variables, for tests that set counters and clocks by hand. */
+export const boardSymbols = join(firmwareFolder, 'evenfall.symbols.json');
+/** Address 0 of the data memory, as the linker writes it. */
+const DATA_MEMORY = 0x80_0000;
 
 const COMMON = ['-std=c++14', '-Wall', '-Wextra', '-Werror', '-fno-exceptions', '-fno-rtti'];
 /** Size first: -Os; one program for the optimizer: -flto; no guard around what is made at the first use. */
@@ -59,6 +63,21 @@ export async function ensureHostBuild() {
   renameSync(made, program);
   rmSync(dirname(made), { recursive: true });
   return program;
+}
+
+/** Name → address in the data memory, of all variables of the program; what the optimizer appended to a name is taken off. */
+export async function symbolsOf(elf) {
+  const lines = (await must('avr-nm', ['--defined-only', elf])).split('\n').map((line) => line.split(' '));
+  const variables = lines.filter(([, type]) => /^[bd]$/i.test(type ?? ''));
+  const names = await must('avr-c++filt', [], {
+    input: variables.map(([, , name]) => `${name.replace(/\.lto_priv\.\d+$/, '')}\n`).join(''),
+  });
+  const named = names
+    .trimEnd()
+    .split('\n')
+    .map((name, index) => [name.replace('(anonymous namespace)::', ''), variables[index][0]]);
+  const ours = named.filter(([name]) => name.includes('::')).map(([name, address]) => [name, Number.parseInt(address, 16) - DATA_MEMORY]);
+  return `${JSON.stringify(Object.fromEntries(ours.sort(([, a], [, b]) => a - b)), null, 2)}\n`;
 }
 
 /** Flash and static memory in bytes. */

@@ -1,6 +1,6 @@
 import { situations } from './link/situations';
 import { tryNight } from './link/try-night';
-import { report } from './report';
+import { soak } from './report';
 
 /**
  * Nights with every kind of trouble on the line and at the machine, from seeds: 1,000 each, or 50,000 as the second figure. `--situation NAME`
@@ -10,7 +10,7 @@ const FIRST = 1_000;
 const SECOND = 50_000;
 const KEPT_VIOLATIONS = 20;
 
-async function main(args: readonly string[]): Promise<void> {
+soak('link', async (args) => {
   const valueOf = (name: string) => args[args.indexOf(name) + 1];
   const only = args.includes('--situation') ? valueOf('--situation') : null;
   const seed = args.includes('--seed') ? Number(valueOf('--seed')) : null;
@@ -28,10 +28,5 @@ async function main(args: readonly string[]): Promise<void> {
     }
     process.stderr.write(`${situation.name}: ${nights[situation.name] ?? 0} nights, ${failedNights} with a violation so far\n`);
   }
-  report({ name: 'link', ok: failedNights === 0, partial: only !== null || seed !== null, nights, failedNights, violations });
-}
-
-main(process.argv.slice(2)).catch((error: unknown) => {
-  process.stderr.write(`soak link: ${error instanceof Error ? (error.stack ?? error.message) : String(error)}\n`);
-  process.exitCode = 2;
+  return { ok: failedNights === 0, partial: only !== null || seed !== null, nights, failedNights, violations };
 });

@@ -2,7 +2,7 @@ import { execFileSync } from 'node:child_process';
 import { mkdirSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 
-export interface SoakResult {
+interface SoakResult {
   name: string;
   ok: boolean;
   /** Only a part was run, to look at it again: the result is printed, not kept. */
@@ -13,7 +13,7 @@ export interface SoakResult {
 const root = join(__dirname, '..', '..');
 
 /** Prints the result as JSON and keeps it, with commit and date, in `docs/soak/NAME.json`. A violation ends the process with 1. */
-export function report({ partial = false, ...result }: SoakResult): void {
+function report({ partial = false, ...result }: SoakResult): void {
   const git = (...args: string[]) => execFileSync('git', args, { cwd: root, encoding: 'utf8' }).trim();
   const stamped = {
     ...result,
@@ -28,4 +28,15 @@ export function report({ partial = false, ...result }: SoakResult): void {
     writeFileSync(join(root, 'docs', 'soak', `${result.name}.json`), text);
   }
   if (!result.ok) process.exitCode = 1;
+}
+
+/** One soak from its arguments to its report; whatever it throws ends the process with 2. */
+export function soak(name: string, run: (args: readonly string[]) => Omit<SoakResult, 'name'> | Promise<Omit<SoakResult, 'name'>>): void {
+  const result = async () => run(process.argv.slice(2));
+  result()
+    .then((done) => report({ ...done, ok: done['ok'] === true, name }))
+    .catch((error: unknown) => {
+      process.stderr.write(`soak ${name}: ${error instanceof Error ? (error.stack ?? error.message) : String(error)}\n`);
+      process.exitCode = 2;
+    });
 }

@@ -1,7 +1,8 @@
 import { uniformInt } from 'pure-rand/distribution/uniformInt';
 import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
 import { hex8 } from '@/firmware-protocol/codec';
-import { LEVEL, sealed } from './firmware-script';
+import { sealed } from '@/scripts/soak/fuzz/almost-lines';
+import { LEVEL } from './firmware-script';
 
 /** What happens to a controller from outside, and when (ms from the beginning). */
 export type Happening = { ms: number } & (

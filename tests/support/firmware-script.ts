@@ -1,8 +1,6 @@
-import { crc16, decodeLine, type EventMessage, type Reply } from '@/firmware-protocol/codec';
-import { hexOf, runFirmware, type HostRun } from './firmware-host';
-
-/** A body with its check word and line feed. */
-export const sealed = (body: string) => `${body} ${crc16(body).toString(16).toUpperCase().padStart(4, '0')}\n`;
+import { decodeLine, type EventMessage, type Reply } from '@/firmware-protocol/codec';
+import { sealed } from '@/scripts/soak/fuzz/almost-lines';
+import { hexOf, runFirmware, type HostRun } from '@/scripts/soak/fuzz/firmware-host';
 
 export const LEVEL = { interlock: 2, supply: 4, key: 8 } as const;
 const MS = 1000;

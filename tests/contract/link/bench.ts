@@ -5,6 +5,8 @@ import type { Clock } from '@/server/interfaces/clock';
 /** A controller on its line, with everything that the conformance suite does to it. One suite, any number of benches. */
 export interface LinkBench {
   clock: Clock;
+  /** The epoch under which this bench's controller can be driven without raising the one it keeps; absent: any will do. */
+  epoch?: number;
   factory: ByteLineFactory;
   /** Lets time pass until `met`; fails with `what` when it is not met within `withinMs`. */
   until(what: string, met: () => boolean, withinMs: number): Promise<void>;
@@ -23,6 +25,9 @@ export interface LinkBench {
   dispose(): Promise<void>;
 }
 
+/** What some benches cannot do. */
+export type BenchDeed = 'armKey' | 'reset';
+
 export interface BenchMaker {
   name: string;
   /** What the controller calls its firmware. */
@@ -31,6 +36,8 @@ export interface BenchMaker {
   make(): Promise<LinkBench>;
   /** The same line with something else at its end; null where the line is one with its controller. */
   makeStranger: ((kind: 'babble' | 'other-major') => Promise<LinkBench>) | null;
+  /** What this bench cannot do, and why: the tests that need it are skipped with that reason in their name. */
+  cannot?: Partial<Record<BenchDeed, string>>;
   /** How far the logged beginning of a timed move may lie from the one asked for, s. */
   beginToleranceS: number;
   /** Length of the noise in a motion: with the pauses of a busy machine shorter than the lease, ms. */
@@ -48,3 +55,10 @@ export const benchRig: RigMotion = {
   homeDeg: 0,
   homeSpeed_deg_s: 10,
 };
+
+/** A test that needs deeds of its bench: skipped, with the reason in its name, where the bench cannot do them. */
+export function testWith({ cannot = {} }: BenchMaker, ...deeds: BenchDeed[]): (name: string, body: () => Promise<void>) => void {
+  const missing = deeds.flatMap((deed) => cannot[deed] ?? []);
+  // reason: stands in the name of the test
+  return missing.length === 0 ? test : (name, body) => test.skip(`${name} (${[...new Set(missing)].join('; ')})`, body);
+}

@@ -1,10 +1,10 @@
 import type { ControllerLimits } from '@/server/interfaces/turntable-link';
-import type { BenchMaker } from './bench';
+import { testWith, type BenchMaker } from './bench';
 import type { Scene } from './scene';
 
 /** What a person at the rig does with the arm key turned: nudges, and limits that are taught. */
 export function atTheRigConformance(maker: BenchMaker, scene: Scene): void {
-  test('turns by a nudge only while the arm key says that somebody is there, and never far', async () => {
+  testWith(maker, 'armKey')('turns by a nudge only while the arm key says that somebody is there, and never far', async () => {
     await scene.begin();
     await scene.watch.ready();
     const before = await scene.bench.trueAngleDeg();
@@ -26,7 +26,11 @@ export function atTheRigConformance(maker: BenchMaker, scene: Scene): void {
     expect(scene.watch.all('motion-began')).toHaveLength(1);
   });
 
-  test('is taught other limits by a person at the rig, obeys them, and keeps them over a reset', async () => {
+  testWith(
+    maker,
+    'armKey',
+    'reset',
+  )('is taught other limits by a person at the rig, obeys them, and keeps them over a reset', async () => {
     await scene.begin();
     await scene.watch.ready();
     const wide = scene.watch.link.limits() as ControllerLimits;

@@ -1,3 +1,4 @@
+import { tagOf } from '@/server/links/command-book';
 import { tryLink } from '@/server/links/try-link';
 import type { BenchMaker } from './bench';
 import { RawPeer } from './raw-peer';
@@ -77,7 +78,7 @@ export function ordersConformance(maker: BenchMaker, scene: Scene): void {
     await peer.ask({ word: 'renew' }, 1);
     const order = {
       word: 'move',
-      tag: `0000${1000 + scene.epoch}`,
+      tag: tagOf(`repeated ${scene.bench.clock.utcMs()}`),
       position: 300,
       speed: 3_000_000,
       acceleration: 6_000_000,

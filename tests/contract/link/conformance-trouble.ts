@@ -1,4 +1,4 @@
-import type { BenchMaker } from './bench';
+import { testWith, type BenchMaker } from './bench';
 import { LinkWatch } from './link-watch';
 import type { Scene } from './scene';
 
@@ -67,7 +67,7 @@ export function troubleConformance(maker: BenchMaker, scene: Scene): void {
     expect(scene.watch.link.health().condition).toBe('refused');
   });
 
-  test('loses its position in a reset in motion, tells so, and refuses to move until homed', async () => {
+  testWith(maker, 'reset')('loses its position in a reset in motion, tells so, and refuses to move until homed', async () => {
     await scene.begin();
     await scene.watch.ready();
     const boot = scene.watch.link.controller()?.bootId;

@@ -11,11 +11,13 @@ export class LinkWatch {
   readonly link: TurntableLink;
   mayRenew = true;
   private count = 0;
+  private readonly bornMs: number;
 
   constructor(
     private readonly bench: LinkBench,
     private readonly epoch: number,
   ) {
+    this.bornMs = Math.round(bench.clock.utcMs());
     this.link = createLink({ factory: bench.factory, clock: bench.clock, rig: benchRig, epoch });
     this.link.setLeaseRule(() => this.mayRenew);
     this.link.subscribe((event) => this.heard.push(event));
@@ -32,7 +34,8 @@ export class LinkWatch {
 
   send(command: (id: string) => LinkCommand): string {
     this.count += 1;
-    const id = `command-${this.epoch}-${this.count}`;
+    // With the time in it: a controller that was there before this test may have met the others (SPEC 3.8).
+    const id = `command-${this.epoch}-${this.bornMs}-${this.count}`;
     this.link.send(command(id));
     return id;
   }

@@ -26,12 +26,14 @@ export class RawPeer {
     return encode({ kind: 'request', epoch: this.epoch, session: order.word === 'hello' ? NO_SESSION : this.session, number, order });
   }
 
-  /** Writes bytes and waits for the next reply. */
-  async put(bytes: string): Promise<string> {
-    const before = this.replies().length;
-    this.line?.write(bytes);
-    await this.bench.until(`a reply to ${bytes.trim()}`, () => this.replies().length > before, 3_000);
-    return this.replies()[before] as string;
+  /** Writes a request and waits for the next reply to it; one to another driver before this one may still come in. */
+  async put(request: string): Promise<string> {
+    const [, , session, number] = request.split(' ');
+    const replies = () => this.lines.filter((line) => line.startsWith(`r ${session} ${number} `));
+    const before = replies().length;
+    this.line?.write(request);
+    await this.bench.until(`a reply to ${request.trim()}`, () => replies().length > before, 3_000);
+    return replies()[before] as string;
   }
 
   async ask(order: Order, number: number): Promise<Reply> {
@@ -44,9 +46,5 @@ export class RawPeer {
 
   async close(): Promise<void> {
     await this.line?.close();
-  }
-
-  private replies(): string[] {
-    return this.lines.filter((line) => line.startsWith('r '));
   }
 }

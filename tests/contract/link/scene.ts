@@ -12,7 +12,7 @@ export class Scene {
 
   async begin(made: Promise<LinkBench> = this.maker.make()): Promise<void> {
     this.bench = await made;
-    this.epoch += 1;
+    this.epoch = this.bench.epoch ?? this.epoch + 1;
     this.watch = new LinkWatch(this.bench, this.epoch);
   }
 

@@ -1,7 +1,7 @@
 import { decodeLine, type EventMessage, type Reply } from '@/firmware-protocol/codec';
 import { SimulatedMachine } from '@/server/links/simulated-machine';
 import { Conversation, START_MS, type Happening } from '@/tests/support/firmware-conversation';
-import { hexOf, runFirmware, type Script } from '@/tests/support/firmware-host';
+import { hexOf, runFirmware, type Script } from '@/scripts/soak/fuzz/firmware-host';
 import { LEVEL } from '@/tests/support/firmware-script';
 
 /**

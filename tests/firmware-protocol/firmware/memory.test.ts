@@ -1,5 +1,6 @@
 import type { ReplyBody } from '@/firmware-protocol/codec';
-import { FirmwareScript, runAll, sealed, type FirmwareRun } from '@/tests/support/firmware-script';
+import { sealed } from '@/scripts/soak/fuzz/almost-lines';
+import { FirmwareScript, runAll, type FirmwareRun } from '@/tests/support/firmware-script';
 
 /** Non-volatile memory: starts (SPEC 3.1), highest epoch (3.3), limits (8.10, 8.11); damage and wear. */
 const NEVER_TAUGHT = { least: -3600, greatest: 3600, speed: 200_000, acceleration: 200_000, home: 100_000 };

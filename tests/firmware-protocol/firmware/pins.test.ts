@@ -2,7 +2,7 @@ import { referenceFirmware } from '@/server/links/board/firmware-file';
 import { EmulatedBoard } from '@/server/links/board/emulated-board';
 import { CPU_HZ, CYCLES_PER_US } from '@/server/links/board/avr-core';
 import { decodeLine, type EventMessage, type Reply } from '@/firmware-protocol/codec';
-import { sealed } from '@/tests/support/firmware-script';
+import { sealed } from '@/scripts/soak/fuzz/almost-lines';
 
 /** The image as it is flashed, on the emulated board: what its STEP, DIR and ENABLE pins do, to the cycle. */
 class Bench {

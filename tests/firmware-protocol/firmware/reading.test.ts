@@ -1,25 +1,15 @@
-import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
-import { uniformInt } from 'pure-rand/distribution/uniformInt';
-import { decodeLine, encode, LineSplitter, type Item } from '@/firmware-protocol/codec';
+import { decodeLine, LineSplitter } from '@/firmware-protocol/codec';
 import invalid from '@/firmware-protocol/vectors/invalid.json';
 import streams from '@/firmware-protocol/vectors/streams.json';
 import valid from '@/firmware-protocol/vectors/valid.json';
-import { FRESH, readByFirmware } from '@/tests/support/firmware-host';
-import { FirmwareScript, sealed } from '@/tests/support/firmware-script';
-
-/** As the host program tells what a line says. A controller drops whatever is no request. */
-function told(item: Item): string[] {
-  if (item.kind === 'blank') return [];
-  if (item.kind === 'unusable') return [`${item.epoch} ${item.session} ${item.number} refused ${item.code}`];
-  if (item.kind !== 'request') return ['dropped'];
-  const body = encode(item).slice('q '.length, -' 0000\n'.length);
-  return [item.order.word === 'hello' ? body.replace(/ hello .*/, ' hello') : body];
-}
+import { almostLines, asRead, sealed } from '@/scripts/soak/fuzz/almost-lines';
+import { FRESH, readByFirmware } from '@/scripts/soak/fuzz/firmware-host';
+import { FirmwareScript } from '@/tests/support/firmware-script';
 
 describe('the firmware reads as the specification and the codec do', () => {
   test('all valid lines', () => {
     const lines = valid.vectors.map(({ line }) => line);
-    expect(readByFirmware(lines.map((line) => `${line}\n`))).toEqual(lines.map((line) => told(decodeLine(line))));
+    expect(readByFirmware(lines.map((line) => `${line}\n`))).toEqual(lines.map((line) => asRead(decodeLine(line))));
   });
 
   test('all invalid lines', () => {
@@ -31,7 +21,7 @@ describe('the firmware reads as the specification and the codec do', () => {
     const read = readByFirmware(streams.vectors.flatMap(({ chunks }) => [...chunks, FRESH]));
     const expected = streams.vectors.flatMap(({ chunks }) => {
       const splitter = new LineSplitter();
-      return [...chunks.map((chunk) => splitter.push(chunk).flatMap(told)), []];
+      return [...chunks.map((chunk) => splitter.push(chunk).flatMap(asRead)), []];
     });
     expect(read).toEqual(expected);
   });
@@ -40,37 +30,10 @@ describe('the firmware reads as the specification and the codec do', () => {
 /** In the suite 10⁵ lines; more by the environment. */
 const LINES = Number(process.env.EVENFALL_FUZZ_LINES ?? 100_000);
 const SEED = 20_260_412;
-const TOKENS = (
-  'q r e x 0 00 1 7 -1 -0 -9999999 9999999 10000000 65535 65536 99999999 100000000 4294967295 4294967296 00000000 1A2B0001 1a2b0001 FFFFFFFF 0000ABCD ' +
-  'ABCD now free keep none ident hello status renew limits events home move hold stop off nudge teach mov statue ok no hi 000000012.345678 12.345678 ' +
-  '999999999.999999 0000000123.45678 100 -100 99 1.5 A 9a'
-).split(' ');
-
-/** Lines between right and wrong: real ones changed by a token, a byte or a cut, most of them honestly sealed. */
-function* almostLines(count: number): Generator<string> {
-  const random = xoroshiro128plus(SEED);
-  const upTo = (last: number) => uniformInt(random, 0, last);
-  const requests = valid.vectors.filter(({ line }) => line.startsWith('q')).map(({ line }) => line.slice(0, -5));
-  const token = () => TOKENS[upTo(TOKENS.length - 1)] as string;
-  for (let made = 0; made < count; made += 1) {
-    const fields = (requests[upTo(requests.length - 1)] as string).split(' ');
-    for (let changes = upTo(2); changes > 0; changes -= 1) {
-      const at = upTo(fields.length - 1);
-      fields.splice(at, upTo(1), ...(upTo(4) === 0 ? [] : [token()]));
-    }
-    let line = sealed(fields.join(' ')).slice(0, -1);
-    if (upTo(3) === 0) {
-      const at = upTo(line.length - 1);
-      line = line.slice(0, at) + String.fromCharCode(upTo(255)).replace('\n', ' ') + line.slice(at + upTo(1));
-    }
-    yield upTo(9) === 0 ? `${line}\r` : line;
-  }
-}
-
 test(`${LINES} seeded lines between right and wrong are read as the codec reads them`, () => {
-  const lines = [...almostLines(LINES)];
+  const lines = [...almostLines(LINES, SEED)];
   const read = readByFirmware(lines.map((line) => `${line}\n`));
-  const differing = lines.filter((line, index) => (read[index] ?? []).join() !== told(decodeLine(line)).join());
+  const differing = lines.filter((line, index) => (read[index] ?? []).join() !== asRead(decodeLine(line)).join());
   expect(differing).toEqual([]);
   const kinds = new Set(lines.map((line) => decodeLine(line).kind));
   expect([...kinds].sort()).toEqual(['garbage', 'request', 'unusable']);

@@ -1,4 +1,5 @@
-import { FirmwareScript, sealed } from '@/tests/support/firmware-script';
+import { sealed } from '@/scripts/soak/fuzz/almost-lines';
+import { FirmwareScript } from '@/tests/support/firmware-script';
 
 /** Stops, lease, inputs: what ends a motion, and where (SPEC 8.4, 9, 10, 11). */
 const LIMITS = 'teach -20000 20000 1000000 2000000 100000';

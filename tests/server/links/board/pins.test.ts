@@ -1,7 +1,6 @@
-import { uniformInt } from 'pure-rand/distribution/uniformInt';
-import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
-import { BoardBench } from '@/tests/support/board-bench';
-import { judge, type Motion } from '@/tests/support/pin-oracle';
+import { BoardBench } from '@/scripts/soak/board/board-bench';
+import { judge, type Motion } from '@/scripts/soak/board/pin-oracle';
+import { runSeededMoves } from '@/scripts/soak/board/seeded-moves';
 
 /** Seeded moves on the emulated board, judged by what its pins did. `EVENFALL_PIN_MOVES` makes more of them. */
 
@@ -9,28 +8,9 @@ const moves = Number(process.env['EVENFALL_PIN_MOVES'] ?? 100);
 jest.setTimeout(60_000 + moves * 1000);
 
 test(`${moves} seeded moves: exact on the step, never faster or steeper than asked, in clean pulses`, () => {
-  const bench = new BoardBench();
-  bench.home();
-  const random = xoroshiro128plus(20);
-  const upTo = (least: number, most: number) => uniformInt(random, least, most);
-  const spread = (least: number, most: number) => Math.round(least * (most / least) ** (upTo(0, 1_000_000) / 1_000_000));
-  const wrong: string[] = [];
-  let stopped = 0;
-  for (let number = 0; number < moves; number += 1) {
-    const from = bench.session.board.table.track.at(Infinity);
-    const speed = spread(50, 8000);
-    const acceleration = spread(200, 8000);
-    const way = Math.min(800, spread(1, Math.max(2, speed))) * (from > 0 ? -1 : 1);
-    const disturbed = number % 5 === 4;
-    const act = () => {
-      stopped += 1;
-      bench.ask(number % 2 === 0 ? { word: 'hold' } : { word: 'status' });
-    };
-    const motion = bench.move({ to: from + way, speed, acceleration }, disturbed ? { afterMs: upTo(1, 400), act } : undefined);
-    wrong.push(...judge(motion).map((words) => `move ${number} by ${way} at ${speed}/s, ${acceleration}/s²: ${words}`));
-  }
+  const { wrong, disturbed } = runSeededMoves(moves, 20);
   expect(wrong).toEqual([]);
-  expect(stopped).toBeGreaterThan(moves / 20);
+  expect(disturbed).toBeGreaterThan(moves / 20);
 });
 
 /** Faults are planted in the record of real moves: in the edges of the pins, or in what the controller said of them. */

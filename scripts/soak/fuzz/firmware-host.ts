@@ -3,7 +3,7 @@ import { join } from 'node:path';
 
 /** The firmware's core as a program of this machine: see `firmware-protocol/firmware/host/main.cpp`. */
 
-const root = join(__dirname, '..', '..');
+const root = join(__dirname, '..', '..', '..');
 const TICKS_PER_US = 2;
 
 let program: string | undefined;

@@ -1,4 +1,14 @@
-import { decodeLine, encode, hex8, NO_SESSION, type EventMessage, type Limits, type Order, type Reply } from '@/firmware-protocol/codec';
+import {
+  decodeLine,
+  encode,
+  hex8,
+  NO_SESSION,
+  type EventMessage,
+  type Item,
+  type Limits,
+  type Order,
+  type Reply,
+} from '@/firmware-protocol/codec';
 import { BoardSession } from '@/server/links/board/board-session';
 import type { BoardOptions, Edge } from '@/server/links/board/emulated-board';
 import { referenceFirmware } from '@/server/links/board/firmware-file';
@@ -6,6 +16,9 @@ import type { Motion } from './pin-oracle';
 
 /** Wide and as quick as the firmware goes. */
 export const quickLimits: Limits = { least: -50_000, greatest: 50_000, speed: 8_000_000, acceleration: 20_000_000, home: 400_000 };
+
+/** SPEC 4.2: an answer begins within 50 ms, and is out soon after. */
+const ANSWERED_MS = 80;
 
 /** The emulated board spoken to by hand, all its edges recorded. Times in ms from power-on, without a rate error. */
 export class BoardBench {
@@ -60,6 +73,26 @@ export class BoardBench {
     this.nowMs = Math.max(this.nowMs, this.session.msAt(this.session.board.cycle));
     this.hear(texts);
     return texts.map(decodeLine).find((item): item is Reply => item.kind === 'reply') ?? null;
+  }
+
+  /** Bytes as they are, and all items that come back until the board has had ample time for them. */
+  hears(bytes: string): Item[] {
+    const before = this.lines.length;
+    this.put(bytes);
+    const { board, lastArrivedCycle } = this.session;
+    this.pass(Math.max(0, this.session.msAt(lastArrivedCycle) - this.session.msAt(board.cycle)) + ANSWERED_MS);
+    return this.lines.slice(before).map(decodeLine);
+  }
+
+  /** Everything as it is now, to go back to. */
+  keep(): () => void {
+    const { id, number, tags } = this;
+    const state = this.session.board.state();
+    return () => {
+      this.session.board.restore(state);
+      this.session.begin(this.nowMs);
+      Object.assign(this, { id, number, tags });
+    };
   }
 
   nextTag(): string {
