@@ -20,40 +20,47 @@ await ensureDebianPackages(['postgresql', 'chromium', 'socat', 'ser2net', 'g++',
 const output = join(root, 'test-output');
 mkdirSync(output, { recursive: true });
 
-let code = whole ? await pass(process.execPath, [join(root, 'scripts', 'check.mjs')], { cwd: root }) : 0;
-if (code === 0) {
-  await ensureWebBuild();
-  const cluster = await startCluster('test');
-  const env = { ...process.env, EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres'), TZ: 'UTC' };
-  const jest = (more, report) =>
-    pass(
-      process.execPath,
-      [join(root, 'node_modules', 'jest', 'bin', 'jest.js'), '--testTimeout=30000', '--json', `--outputFile=${report}`, ...more],
-      { cwd: root, env },
-    );
-  const [inBrowser, other] = [join(output, 'jest-browser.json'), join(output, 'jest.json')];
-  for (const report of [inBrowser, other]) rmSync(report, { force: true });
-  // The browser's tests wait for the browser most of the time: the others run beside them, each in one row of their own.
-  const codes = await Promise.all(
-    whole
-      ? [jest(['--selectProjects', 'e2e', '-i'], inBrowser), jest(['--selectProjects', 'node', 'web', '-i'], other)]
-      : [jest(args, other)],
+const cluster = await startCluster('test');
+const env = { ...process.env, EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres'), TZ: 'UTC' };
+const jest = (more, report) =>
+  pass(
+    process.execPath,
+    [join(root, 'node_modules', 'jest', 'bin', 'jest.js'), '--testTimeout=30000', '--json', `--outputFile=${report}`, ...more],
+    { cwd: root, env },
   );
-  code = Math.max(...codes);
-  const first = (whole ? [inBrowser, other] : [other]).map((report) => JSON.parse(readFileSync(report, 'utf8')));
-  const sum = (key) => first.reduce((all, report) => all + report[key], 0);
-  const failed = first.flatMap(({ testResults }) => testResults.filter(({ status }) => status === 'failed').map(({ name }) => name));
-  let stillFailed = sum('numFailedTests');
-  if (whole && failed.length > 0 && failed.every((name) => inRealTime.test(name))) {
-    say(`Second try, alone, for what runs in real time and may starve on a busy machine:\n  ${failed.join('\n  ')}`);
-    const again = join(output, 'jest-again.json');
-    code = await jest(['-i', '--runTestsByPath', ...failed], again);
-    stillFailed = JSON.parse(readFileSync(again, 'utf8')).numFailedTests;
-  }
-  if (!cluster.wasRunning) await cluster.stop();
-  say(`${((Date.now() - start) / 1000).toFixed(0)} s in all`);
-  process.stdout.write(
-    `${sum('numTotalTests') - stillFailed - sum('numPendingTests')} passed, ${stillFailed} failed, ${sum('numPendingTests')} skipped\n`,
-  );
+const [inBrowser, other] = [join(output, 'jest-browser.json'), join(output, 'jest.json')];
+for (const report of [inBrowser, other]) rmSync(report, { force: true });
+
+/** The browser's tests and those on PostgreSQL wait most of the time: all goes on beside each other, each in one row of its own. */
+async function all() {
+  const [checked, ...tested] = await Promise.all([
+    pass(process.execPath, [join(root, 'scripts', 'check.mjs')], { cwd: root }),
+    ensureWebBuild().then(() => jest(['--selectProjects', 'e2e', '-i'], inBrowser)),
+    jest(['--selectProjects', 'node', 'web', '-i'], other),
+  ]);
+  return { checked, tested: Math.max(...tested) };
 }
-process.exit(code);
+
+async function some() {
+  await ensureWebBuild();
+  return { checked: 0, tested: await jest(args, other) };
+}
+
+const ran = await (whole ? all() : some());
+let { tested } = ran;
+const reports = (whole ? [inBrowser, other] : [other]).map((report) => JSON.parse(readFileSync(report, 'utf8')));
+const sum = (key) => reports.reduce((total, report) => total + report[key], 0);
+const failed = reports.flatMap(({ testResults }) => testResults.filter(({ status }) => status === 'failed').map(({ name }) => name));
+let stillFailed = sum('numFailedTests');
+if (whole && failed.length > 0 && failed.every((name) => inRealTime.test(name))) {
+  say(`Second try, alone, for what runs in real time and may starve on a busy machine:\n  ${failed.join('\n  ')}`);
+  const again = join(output, 'jest-again.json');
+  tested = await jest(['-i', '--runTestsByPath', ...failed], again);
+  stillFailed = JSON.parse(readFileSync(again, 'utf8')).numFailedTests;
+}
+if (!cluster.wasRunning) await cluster.stop();
+say(`${((Date.now() - start) / 1000).toFixed(0)} s in all`);
+process.stdout.write(
+  `${sum('numTotalTests') - stillFailed - sum('numPendingTests')} passed, ${stillFailed} failed, ${sum('numPendingTests')} skipped\n`,
+);
+process.exit(Math.max(ran.checked, tested));
