@@ -7,6 +7,7 @@ import type { EvaluationResult } from '@/shared/evaluation/result';
 import { NotYetError } from '@/shared/lib/not-yet-error';
 import { readArchiveFiles } from '../evaluation/archive-files';
 import { sha256Hex } from '../evaluation/sha256';
+import { createTrialCrew } from './parallel-trials';
 
 /** `npm run -s evaluate -- PATH …`: G and its uncertainty from an archive, without server, database or network. */
 
@@ -22,8 +23,12 @@ const options = {
 
 class UnusableArguments extends Error {}
 
+/** Monte Carlo trials where the command line does not say how many. */
+const usualTrials = 100_000;
+
 interface Request {
   path: string;
+  trials: number;
   options: EvaluationOptions;
 }
 
@@ -31,12 +36,13 @@ function requested(args: readonly string[]): Request {
   const { values, positionals } = parsedArguments(args);
   const [path, ...more] = positionals;
   if (path === undefined || more.length > 0) throw new UnusableArguments(`name one archive, a folder or a ZIP.\n${usage}`);
-  if (values.trials !== undefined && !/^\d+$/.test(values.trials))
-    throw new UnusableArguments(`--trials ${values.trials}: a whole number of 0 or more is needed`);
+  if (values.trials !== undefined && !/^\d{1,8}$/.test(values.trials))
+    throw new UnusableArguments(`--trials ${values.trials}: a whole number from 0 to 99 999 999 is needed`);
   const boundRad = values.bound === undefined ? undefined : Number(values.bound);
   if (boundRad !== undefined && !(boundRad > 0)) throw new UnusableArguments(`--bound ${values.bound}: a positive angle in rad is needed`);
   return {
     path,
+    trials: values.trials === undefined ? usualTrials : Number(values.trials),
     options: {
       ...(values.method === undefined ? {} : { method: methodOf(values.method) }),
       ...(values.channel === undefined ? {} : { channel: values.channel }),
@@ -59,9 +65,15 @@ function methodOf(name: string): EvaluationMethod {
   return method;
 }
 
-/** Evaluates the archive at a path. @throws UnusableArchive, NotYetError */
-export function evaluatePath(path: string, chosen: EvaluationOptions = {}): EvaluationResult {
-  return evaluateArchive(readArchive(readArchiveFiles(path), sha256Hex), chosen).result;
+/** Evaluates the archive at a path, with Monte Carlo trials. @throws UnusableArchive, NotYetError */
+async function evaluatePath(path: string, chosen: EvaluationOptions = {}, trials = usualTrials): Promise<EvaluationResult> {
+  const crew = createTrialCrew(trials);
+  try {
+    const { result, trialModel } = evaluateArchive(readArchive(readArchiveFiles(path), sha256Hex), chosen);
+    return { ...result, monteCarlo: trialModel === null ? null : await crew.run(trialModel) };
+  } finally {
+    await crew.close();
+  }
 }
 
 export interface Output {
@@ -72,10 +84,10 @@ export interface Output {
 const toProcess: Output = { out: (text) => process.stdout.write(text), err: (text) => process.stderr.write(text) };
 
 /** The command: one JSON object on `out` and 0, or a message on `err` and 2. `args` are those after the command's name. */
-export function main(args: readonly string[], output: Output = toProcess): number {
+export async function main(args: readonly string[], output: Output = toProcess): Promise<number> {
   try {
-    const request = requested(args);
-    output.out(`${JSON.stringify(evaluatePath(request.path, request.options), null, 2)}\n`);
+    const { path, options: chosen, trials } = requested(args);
+    output.out(`${JSON.stringify(await evaluatePath(path, chosen, trials), null, 2)}\n`);
     return 0;
   } catch (error) {
     if (error instanceof NotYetError) output.err(`evaluate: ${error.message} [${error.code}]\n`);
@@ -85,4 +97,4 @@ export function main(args: readonly string[], output: Output = toProcess): numbe
   }
 }
 
-if (require.main === module) process.exitCode = main(process.argv.slice(2));
+if (require.main === module) void main(process.argv.slice(2)).then((code) => (process.exitCode = code));

@@ -164,7 +164,10 @@ function nextRound(outcome: FitOutcome, round: Round, averagesOn: (scale: Channe
         ? round.start
         : { omega: ringDown[0] as number, gamma: ringDown[1] as number },
     shifts,
-    bias: found === null || system === null || solution === null ? null : curvatureBias(segments, found, { system, solution, shifts }),
+    bias:
+      found === null || system === null || solution === null
+        ? null
+        : curvatureBias(segments, found, { system, solution, shifts, before: round.bias }),
   };
 }
 

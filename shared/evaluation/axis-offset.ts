@@ -17,7 +17,8 @@ function torqueBeside(geometry: TorqueGeometry, psiRad: number, axis: { x: numbe
         const angle = psiRad + pair.angleRad + turned;
         const x = axis.x + pair.orbitM * Math.cos(angle) - radiusM;
         const y = axis.y + pair.orbitM * Math.sin(angle);
-        torque += (massKg * pair.massKg * radiusM * y) / Math.hypot(x, y, pair.offsetM) ** 3;
+        const pull = pair.cylinder?.pull(x * x + y * y).value ?? Math.hypot(x, y, pair.offsetM) ** -3;
+        torque += massKg * pair.massKg * radiusM * y * pull;
       }
     }
   }

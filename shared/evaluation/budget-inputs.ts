@@ -16,7 +16,7 @@ export interface BudgetInput {
 export function budgetInputs(rig: RigDocument, use: { stations: readonly string[]; lever: boolean }): BudgetInput[] {
   const paths = [
     ...['arm', 'ballMass', 'ballRadius', 'beamMass', 'beamLength', 'extraInertia'].map((key) => ['pendulum', key]),
-    ...['mass', 'orbit', 'offset'].map((key) => ['sources', key]),
+    ...['mass', 'orbit', 'offset', ...(rig.sources.shape === 'cylinder' ? ['radius', 'height'] : [])].map((key) => ['sources', key]),
     ...(rig.sources.extra ?? []).flatMap((_, k) => ['mass', 'orbit', 'angle', 'offset'].map((key) => ['sources', 'extra', String(k), key])),
     ...use.stations.map((name) => ['stations', name]),
     ...(use.lever ? ['distance', 'zero'].map((key) => ['lever', key]) : []),

@@ -1,23 +1,26 @@
 import { effectiveDegreesOfFreedom } from '../statistics/weighted-mean';
-import type { RigDocument } from '../rig/document';
+import type { Quantity, RigDocument } from '../rig/document';
 import { budgetInputs, derivativeStep } from './budget-inputs';
 import type { Known } from './free-oscillator';
 import type { BudgetLine } from './result';
 
-/** G as a function of everything it is computed from; each key left out stays as it was observed. */
-export type GOf = (changes: { rig?: RigDocument; reversalRad?: number; periodS?: number; decayTimeS?: number }) => number;
-
 export interface BudgetQuestion {
   rig: RigDocument;
   bigG: number;
-  gOf: GOf;
+  /** G of the same observations for a rig supposed otherwise. */
+  gOf: (rig: RigDocument) => number;
   stations: readonly string[];
   lever: boolean;
-  reversal: Known;
-  period: Known;
-  decayTime: Known | null;
+  /** What was observed, with ∂G/∂input. */
+  observed: readonly ObservedTerm[];
   /** Relative change of G by the offset between turntable axis and fibre; null where the rig states none. */
   axisOffset: { value: number; u: number; relative: number } | null;
+}
+
+export interface ObservedTerm {
+  input: 'reversal_rad' | 'period_s' | 'decayTime_s';
+  known: Known;
+  sensitivity: number;
 }
 
 export interface Budget {
@@ -26,75 +29,87 @@ export interface Budget {
   u: number;
   /** Infinity where only values without stated degrees of freedom count. */
   degreesOfFreedom: number;
+  terms: BudgetTerm[];
 }
 
-interface Term {
+/** One input of the budget with what the published line leaves out. */
+export interface BudgetTerm {
   line: Omit<BudgetLine, 'share'>;
   /** Sensitivity times u, with its sign. */
   signed: number;
+  /** ∂G/∂input itself, also where the line shows what the second order makes of it. */
+  slope: number;
   nu: number;
   group: string | null;
+  rectangular: boolean;
 }
 
 /**
- * The linear budget (JCGM 100:2008, 5): each sensitivity is the derivative of the whole solution, κ and the ring-down's
- * correction included. Inputs of one group share their error fully, so their contributions add with their signs.
+ * The budget (JCGM 100:2008, 5): each sensitivity is the derivative of the whole solution, κ and the ring-down's correction
+ * included. Where the derivative vanishes, as at the greatest torque, what the second order does is put in its place. Inputs of one
+ * group share their error fully, so their contributions add with their signs.
  */
 export function budgetOf(question: BudgetQuestion): Budget {
-  const terms = [...rigTerms(question), ...observedTerms(question), ...axisTerm(question)];
+  const observed = question.observed.map(({ input, known, sensitivity }) => term(input, known, { slope: sensitivity }));
+  const terms = [...rigTerms(question), ...observed, ...axisTerm(question)];
   const all = Math.hypot(...terms.map(({ line }) => line.contribution));
   const joined = joinGroups(terms);
   const u = Math.hypot(...joined.map(({ contribution }) => contribution));
   const lines = terms
     .map(({ line }) => ({ ...line, share: all === 0 ? 0 : (line.contribution / all) ** 2 }))
     .sort((a, b) => b.contribution - a.contribution);
-  return { lines, u, degreesOfFreedom: effectiveDegreesOfFreedom(joined) };
+  return { lines, u, degreesOfFreedom: effectiveDegreesOfFreedom(joined), terms };
 }
 
-function term(input: string, known: Known & { group?: string | undefined }, sensitivity: number): Term {
+type Stated = Known & Pick<Quantity, 'group' | 'distribution'>;
+
+/** `secondOrder` is the standard deviation of G that the curvature alone makes. */
+function term(input: string, known: Stated, { slope, secondOrder = 0 }: { slope: number; secondOrder?: number }): BudgetTerm {
+  const curved = secondOrder > Math.abs(slope) * known.u;
+  const sensitivity = curved ? Math.hypot(slope, secondOrder / known.u) : slope;
   const signed = sensitivity * known.u;
   return {
     line: { input, value: known.value, u: known.u, sensitivity, contribution: Math.abs(signed) },
     signed,
+    slope,
     nu: known.nu,
-    group: known.group ?? null,
+    // A square has no sign to share with others.
+    group: curved ? null : (known.group ?? null),
+    rectangular: known.distribution === 'rectangular',
   };
 }
 
-function rigTerms({ rig, gOf, stations, lever }: BudgetQuestion): Term[] {
+function rigTerms({ rig, bigG, gOf, stations, lever }: BudgetQuestion): BudgetTerm[] {
   return budgetInputs(rig, { stations, lever }).map(({ path, quantity, shifted }) => {
-    const sensitivity = derivative((step) => gOf({ rig: shifted(step) }), derivativeStep(quantity));
-    return term(path, { value: quantity.value, u: quantity.u, nu: quantity.nu ?? Infinity, group: quantity.group }, sensitivity);
+    const slope = derivative((step) => gOf(shifted(step)), derivativeStep(quantity));
+    const known = { ...quantity, nu: quantity.nu ?? Infinity };
+    return term(path, known, { slope, secondOrder: secondOrderOf(quantity, (step) => gOf(shifted(step)) - bigG) });
   });
 }
 
-function observedTerms({ gOf, reversal, period, decayTime }: BudgetQuestion): Term[] {
-  const relativeStep = 1e-4;
-  const byReversal = derivative((step) => gOf({ reversalRad: reversal.value + step }), relativeStep * Math.abs(reversal.value));
-  const decayTimeS = decayTime?.value ?? Infinity;
-  const byPeriod = derivative((step) => gOf({ periodS: period.value + step, decayTimeS }), relativeStep * period.value);
-  const terms = [term('reversal_rad', reversal, byReversal), term('period_s', period, byPeriod)];
-  if (decayTime === null) return terms;
-  const byDecay = derivative((step) => gOf({ periodS: period.value, decayTimeS: decayTime.value + step }), relativeStep * decayTime.value);
-  return [...terms, term('decayTime_s', decayTime, byDecay)];
+/** ½ |G''| times the standard deviation of the square: √2 u² of a normal quantity, √0.8 u² of a rectangular one. */
+function secondOrderOf({ u, distribution }: Quantity, change: (step: number) => number): number {
+  if (u === 0) return 0;
+  const bend = Math.abs(change(u) + change(-u)) / 2;
+  return bend * Math.sqrt(distribution === 'rectangular' ? 0.8 : 2);
 }
 
 /** Where the offset's direction is not known its whole size counts as uncertainty, and what it does to G goes with its square. */
-function axisTerm({ bigG, axisOffset }: BudgetQuestion): Term[] {
+function axisTerm({ bigG, axisOffset }: BudgetQuestion): BudgetTerm[] {
   if (axisOffset === null) return [];
   const u = Math.hypot(axisOffset.value, axisOffset.u);
   const sensitivity = u === 0 ? 0 : (axisOffset.relative * Math.abs(bigG)) / u;
-  return [term('axis.offset', { value: axisOffset.value, u, nu: Infinity }, sensitivity)];
+  return [term('axis.offset', { value: axisOffset.value, u, nu: Infinity }, { slope: sensitivity })];
 }
 
 /** Central difference with one step of Richardson's extrapolation. */
-function derivative(f: (step: number) => number, step: number): number {
+export function derivative(f: (step: number) => number, step: number): number {
   const coarse = (f(step) - f(-step)) / (2 * step);
   const fine = (f(step / 2) - f(-step / 2)) / step;
   return (4 * fine - coarse) / 3;
 }
 
-function joinGroups(terms: readonly Term[]): { contribution: number; nu: number }[] {
+function joinGroups(terms: readonly BudgetTerm[]): { contribution: number; nu: number }[] {
   const alone = terms.filter(({ group }) => group === null).map(({ signed, nu }) => ({ contribution: signed, nu }));
   const groups = new Map<string, { contribution: number; nu: number }>();
   for (const { group, signed, nu } of terms) {

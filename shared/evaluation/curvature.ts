@@ -4,7 +4,7 @@ import { cosine, offset, ringDownSegment, sine } from '../statistics/ring-down';
 import { isOscillation } from '../statistics/ring-down-start';
 import { fitSeparable, solveAtFixedAlpha } from '../statistics/variable-projection';
 import type { Segment } from './analysis';
-import type { DwellFit, FitBias } from './ring-down-fit';
+import type { DwellFit, FitBias, Ringing, Start } from './ring-down-fit';
 import type { GSolution, GSystem } from './solve-g';
 
 /**
@@ -13,18 +13,21 @@ import type { GSolution, GSystem } from './solve-g';
  * how much; taking that off and solving again settles in a few rounds.
  */
 
-const stepsPerDatum = 2;
+/** Kicks between the instants at which the exact series is read: two readings for each datum, three kicks to a reading. */
+const kicksPerReading = 3;
 
 /** By how much the linear model misses centre, frequency and decay at a solution, with the stiffness of the sources (rad2/s2) that goes with it. */
 export function curvatureBias(
   segments: readonly Segment[],
   found: DwellFit,
-  { system, solution, shifts }: { system: GSystem; solution: GSolution; shifts: readonly number[] },
+  at: { system: GSystem; solution: GSolution; shifts: readonly number[]; before: FitBias | null },
 ): FitBias {
+  const { system, solution, shifts, before } = at;
   const { gamma } = solution;
   const omega = Math.sqrt(solution.omega0Squared - gamma * gamma);
+  const starts = segments.map((segment, i) => startOf(found, i, { before, omega: segmentOmega(omega, shifts[i] as number) }));
   const exact = segments.map((segment, i) => {
-    const y = exactRinging(segment, { system, solution, start: startOf(found, i, segment) });
+    const y = exactRinging(segment, { system, solution, start: starts[i] as Start });
     return ringDownSegment({
       tS: segment.averages.t,
       y,
@@ -36,32 +39,38 @@ export function curvatureBias(
   const fit =
     found.ringDown === null
       ? solveAtFixedAlpha(exact, [omega, gamma])
-      : fitSeparable(exact, [omega, gamma], { allowed: isOscillation, tolerance: 1e-9 });
+      : fitSeparable(exact, [omega, gamma], { allowed: isOscillation, tolerance: 1e-10 });
   return {
     centres: fit.segments.map(({ coefficients }) => coefficients[offset] as number),
     omega: (fit.alpha[0] as number) - omega,
     gamma: (fit.alpha[1] as number) - gamma,
+    starts,
+    ringing: fit.segments.map(ringingOf),
   };
 }
 
-interface Start {
-  /** Departure from the equilibrium, rad, and its rate, rad/s, at the start of the window. */
-  x: number;
-  v: number;
-}
+const segmentOmega = (omega: number, shift: number) => Math.sqrt(omega * omega + shift);
 
-function startOf(found: DwellFit, index: number, { averages: { t, weight } }: Segment): Start {
-  const { coefficients } = found.fit.segments[index] as { coefficients: Float64Array };
-  const [omega, gamma] = found.fit.alpha as [number, number];
-  const [a, b] = [coefficients[cosine] as number, coefficients[sine] as number];
-  // Averaging over a box of width w takes about (ωw)²/24 off the amplitude.
-  const boxS = (weight[0] as number) > 1 ? (t[1] as number) - (t[0] as number) : 0;
-  const gain = 1 - (omega * boxS) ** 2 / 24;
-  return { x: a / gain, v: (omega * b - gamma * a) / gain };
+function ringingOf({ coefficients }: { coefficients: Float64Array }): Ringing {
+  return { a: coefficients[cosine] as number, b: coefficients[sine] as number };
 }
 
 /**
- * Departure from the equilibrium at the instants of the data: the linear part is stepped exactly, the rest of the torque, a
+ * State at the start of a window, rad and rad/s. At first from the fitted amplitudes as if the pendulum were linear; later from what
+ * the exact series lacked of the amplitudes fitted to the data.
+ */
+function startOf(found: DwellFit, index: number, { before, omega }: { before: FitBias | null; omega: number }): Start {
+  const gamma = found.fit.alpha[1] as number;
+  const fitted = ringingOf(found.fit.segments[index] as { coefficients: Float64Array });
+  const known = before?.starts[index];
+  const shown = before?.ringing[index];
+  if (known === undefined || shown === undefined) return { x: fitted.a, v: omega * fitted.b - gamma * fitted.a };
+  const lacking = { a: fitted.a - shown.a, b: fitted.b - shown.b };
+  return { x: known.x + lacking.a, v: known.v + omega * lacking.b - gamma * lacking.a };
+}
+
+/**
+ * Departure from the equilibrium, averaged as the data are: the linear part is stepped exactly, the rest of the torque, a
  * thousandth of it, acts as kicks in between (Strang splitting).
  */
 function exactRinging(segment: Segment, { system, solution, start }: { system: GSystem; solution: GSolution; start: Start }): Float64Array {
@@ -76,17 +85,20 @@ function exactRinging(segment: Segment, { system, solution, start }: { system: G
   const step = propagator(omega0Squared, gamma);
   let { x, v } = start;
   let at = 0;
-  return segment.averages.t.map((tS) => {
-    const h = (tS - at) / stepsPerDatum;
+  const readAt = (tS: number): number => {
+    const h = (tS - at) / kicksPerReading;
     const advance = step(h);
-    for (let k = 0; k < stepsPerDatum; k += 1) {
+    for (let k = 0; k < kicksPerReading; k += 1) {
       v += (h / 2) * kick(x);
       [x, v] = advance(x, v);
       v += (h / 2) * kick(x);
     }
     at = tS;
     return x;
-  });
+  };
+  const { t, spreadS } = segment.averages;
+  // Two readings at the spread of the samples about their mean average as the samples do, to the third order.
+  return t.map((tS, i) => (readAt(tS - (spreadS[i] as number)) + readAt(tS + (spreadS[i] as number))) / 2);
 }
 
 /** Exact step of the damped oscillator over h seconds. */

@@ -11,6 +11,8 @@ export interface EvaluationOptions {
   channel?: string;
   /** Bound of equivalence of an empty control, rad. */
   boundRad?: number;
+  /** Monte Carlo trials, 0 (the default here) for none. */
+  trials?: number;
 }
 
 /** What is to be done, and whether that is what the protocol registered beforehand. */
@@ -31,7 +33,6 @@ export function evaluationPlan(archive: Archive, options: EvaluationOptions): Ev
   const registered = archive.registered;
   const method = options.method ?? registered?.method ?? 'equilibrium';
   if (method !== 'equilibrium') throw new NotYetError(`the method "${method}" is not built yet; "equilibrium" is`);
-  if (options.boundRad !== undefined) throw new NotYetError('the test of an empty control against a bound is not built yet');
   const drift = registered?.drift ?? 'aba';
   if (drift === 'gls') throw new NotYetError('the drift model "gls" of protocol.json is not built yet; "aba" and "polynomial" are');
   const channel = chooseChannel(archive, options.channel ?? registered?.channel ?? null);

@@ -4,6 +4,15 @@ import * as z from 'zod';
 
 const withU = z.strictObject({ value: z.number(), u: z.number() });
 
+/** The test of an empty control; null in a place: it cannot be told. */
+const controlResultSchema = z.strictObject({
+  expected_rad: z.number(),
+  bound_rad: z.number().nullable(),
+  p: z.number().nullable(),
+  equivalent: z.boolean().nullable(),
+});
+export type ControlResult = z.infer<typeof controlResultSchema>;
+
 const dwellResultSchema = z.strictObject({
   seq: z.number().int(),
   station: z.string(),
@@ -35,7 +44,7 @@ export const evaluationResultSchema = z.strictObject({
   kappa_N_m: withU.nullable(),
   dwells: z.array(dwellResultSchema),
   reversal_rad: z
-    .strictObject({ value: z.number(), u: z.number().nullable(), count: z.number().int(), equivalence: z.unknown().optional() })
+    .strictObject({ value: z.number(), u: z.number().nullable(), count: z.number().int(), equivalence: controlResultSchema.optional() })
     .nullable(),
   G: z.strictObject({ value: z.number(), u: z.number().nullable(), degreesOfFreedom: z.number().nullable() }).nullable(),
   relativeU: z.number().nullable(),

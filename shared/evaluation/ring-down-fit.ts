@@ -23,6 +23,21 @@ export interface FitBias {
   centres: number[];
   omega: number;
   gamma: number;
+  /** The states from which the exact series began, and the amplitudes that the linear model found in them. */
+  starts: Start[];
+  ringing: Ringing[];
+}
+
+/** Departure from the equilibrium, rad, and its rate, rad/s, at the start of a window. */
+export interface Start {
+  x: number;
+  v: number;
+}
+
+/** Amplitudes of cosine and sine at the start of a window, rad. */
+export interface Ringing {
+  a: number;
+  b: number;
 }
 
 export interface DwellFit {

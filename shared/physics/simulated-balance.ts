@@ -46,7 +46,7 @@ const TINY = 1e-9;
 
 /**
  * A torsion pendulum between the sources, as it would be read: the true angle of `Pendulum` and the noise of `rig.noise`.
- * @throws Error when the rig has no measured period and decay time; NotYetError for sources that are not built yet
+ * @throws Error when the rig has no measured period and decay time
  */
 export function createSimulatedBalance(options: SimulatedBalanceOptions): SimulatedBalance {
   const { rig, bigG, seed, rateHz, startUtcMs } = options;
@@ -84,7 +84,7 @@ interface PendulumSetting {
   bigG: number;
 }
 
-/** I θ̈ + 2 I γ θ̇ + κ θ = G g(φ − θ), with the exact torque g of spheres and beam, by the classical Runge-Kutta rule. */
+/** I θ̈ + 2 I γ θ̇ + κ θ = G g(φ − θ), with the exact torque g of the sources, by the classical Runge-Kutta rule. */
 class Pendulum {
   angleRad: number;
   speedRadS: number;

@@ -1,6 +1,8 @@
-import { NotYetError } from '@/shared/lib/not-yet-error';
 import type { RigDocument } from '@/shared/rig/document';
 import { RAD_PER_DEG } from './constants';
+import { cylinderPull, type Pull } from './cylinder';
+import { gaussLegendre } from '@/shared/statistics/gauss-legendre';
+import { splined, type ValueAndSlope } from './torque-table';
 
 /** One kind of attracting body on the turntable, present twice, opposite each other. */
 export interface SourcePair {
@@ -12,6 +14,8 @@ export interface SourcePair {
   offsetM: number;
   /** Direction counted from the main source, rad. */
   angleRad: number;
+  /** Cylinders only: their pull over distance (`cylinderPull`), and the torque of a pair of unit mass over G as a spline of ψ. */
+  cylinder?: { pull: (squareM2: number) => Pull; torque: (psiRad: number) => ValueAndSlope };
 }
 
 /** All that the gravitational torque depends on, as plain numbers. */
@@ -26,19 +30,13 @@ export interface TorqueGeometry {
   pairs: SourcePair[];
 }
 
-/**
- * The geometry of a rig. A rig with `sources.shape` `none` keeps only what else turns along (`sources.extra`).
- * @throws NotYetError for cylinders.
- */
+type Pendulum = Omit<TorqueGeometry, 'pairs'>;
+
+/** The geometry of a rig. A rig with `sources.shape` `none` keeps only what else turns along (`sources.extra`). */
 export function geometryOf(rig: RigDocument): TorqueGeometry {
-  const { pendulum, sources } = rig;
-  if (sources.shape === 'cylinder')
-    throw new NotYetError('sources.shape: the torque of cylinders is not built yet; use "sphere" or "none"');
-  const pairs: SourcePair[] = [];
-  if (sources.shape === 'sphere') {
-    if (sources.mass === undefined || sources.orbit === undefined) throw new Error('sources.mass and sources.orbit are needed for spheres');
-    pairs.push({ massKg: sources.mass.value, orbitM: sources.orbit.value, offsetM: sources.offset?.value ?? 0, angleRad: 0 });
-  }
+  const { sources } = rig;
+  const pendulum = pendulumOf(rig);
+  const pairs = sources.shape === 'none' ? [] : [mainPair(rig, pendulum)];
   for (const part of sources.extra ?? []) {
     pairs.push({
       massKg: part.mass.value,
@@ -47,29 +45,43 @@ export function geometryOf(rig: RigDocument): TorqueGeometry {
       angleRad: part.angle.value * RAD_PER_DEG,
     });
   }
-  return {
-    armM: pendulum.arm.value,
-    ballMassKg: pendulum.ballMass.value,
-    beamMassKg: pendulum.beamMass.value,
-    beamHalfLengthM: pendulum.beamLength.value / 2,
-    pairs,
-  };
+  return { ...pendulum, pairs };
+}
+
+function pendulumOf({ pendulum: { arm, ballMass, beamMass, beamLength } }: RigDocument): Pendulum {
+  return { armM: arm.value, ballMassKg: ballMass.value, beamMassKg: beamMass.value, beamHalfLengthM: beamLength.value / 2 };
+}
+
+function mainPair({ sources }: RigDocument, pendulum: Pendulum): SourcePair {
+  const { mass, orbit, radius, height, offset, shape } = sources;
+  if (mass === undefined || orbit === undefined) throw new Error(`sources.mass and sources.orbit are needed for shape ${shape}`);
+  const pair: SourcePair = { massKg: mass.value, orbitM: orbit.value, offsetM: offset?.value ?? 0, angleRad: 0 };
+  if (shape !== 'cylinder') return pair;
+  if (radius === undefined || height === undefined) throw new Error('sources.radius and sources.height are needed for cylinders');
+  const pull = cylinderPull({ radiusM: radius.value, heightM: height.value, offsetM: pair.offsetM });
+  return { ...pair, cylinder: { pull, torque: splined((psiRad) => cylinderTorque(pendulum, { orbitM: pair.orbitM, pull }, psiRad)) } };
 }
 
 /**
  * Gravitational torque on the pendulum divided by G, kg2/m, at ψ = turntable angle − pendulum angle (rad). Uniform
- * spheres count as points, the beam as a thin uniform rod. Odd in ψ, period π.
+ * spheres count as points, cylinders as what they are, the beam as a thin uniform rod. Odd in ψ, period π.
  */
 export function torquePerG(geometry: TorqueGeometry, psiRad: number): number {
   let sum = 0;
-  for (const pair of geometry.pairs) sum += pairTorque(geometry, pair, psiRad + pair.angleRad);
+  for (const pair of geometry.pairs) {
+    const psi = psiRad + pair.angleRad;
+    sum += pair.cylinder === undefined ? pairTorque(geometry, pair, psi) : pair.massKg * pair.cylinder.torque(psi).value;
+  }
   return sum;
 }
 
 /** Derivative of `torquePerG` by ψ, kg2 m-1 rad-1. The stiffness seen by the pendulum is κ + G times this. */
 export function torqueGradientPerG(geometry: TorqueGeometry, psiRad: number): number {
   let sum = 0;
-  for (const pair of geometry.pairs) sum += pairGradient(geometry, pair, psiRad + pair.angleRad);
+  for (const pair of geometry.pairs) {
+    const psi = psiRad + pair.angleRad;
+    sum += pair.cylinder === undefined ? pairGradient(geometry, pair, psi) : pair.massKg * pair.cylinder.torque(psi).slope;
+  }
   return sum;
 }
 
@@ -134,4 +146,27 @@ function beamGradient(geometry: TorqueGeometry, pair: SourcePair, { sin, cos }: 
   const denominator = s * w * inner;
   const denominatorSlope = wSlope * ((w * inner) / s + s * (inner + w));
   return scale * ((cos * cos - sin * sin) / denominator - (sin * cos * denominatorSlope) / (denominator * denominator));
+}
+
+/** Points and weights of Gauss and Legendre on (0, 1) along half the beam, which a cylinder pulls without a closed form. */
+const beamPoints = gaussLegendre(24);
+
+/** Torque of two opposite cylinders of unit mass over G, kg/m, and its derivative by ψ: the balls as points, the beam by quadrature. */
+function cylinderTorque(
+  pendulum: Pendulum,
+  { orbitM, pull }: { orbitM: number; pull: (squareM2: number) => Pull },
+  psiRad: number,
+): ValueAndSlope {
+  const [sin, cos] = [Math.sin(psiRad), Math.cos(psiRad)];
+  const total = { value: 0, slope: 0 };
+  const add = (massKg: number, armM: number) => {
+    const square = armM * armM + orbitM * orbitM;
+    const product = 2 * armM * orbitM;
+    const [near, far] = [pull(square - product * cos), pull(square + product * cos)];
+    total.value += massKg * product * sin * (near.value - far.value);
+    total.slope += massKg * product * (cos * (near.value - far.value) + product * sin * sin * (near.slope + far.slope));
+  };
+  add(pendulum.ballMassKg, pendulum.armM);
+  for (const [x, weight] of beamPoints) add((weight * pendulum.beamMassKg) / 2, x * pendulum.beamHalfLengthM);
+  return total;
 }

@@ -36,7 +36,6 @@ function equilibriumAt({ geometry, oscillator }: Pendulum, angleDeg: number): nu
 /**
  * Pendulum angle (rad) at which the pendulum comes to rest with the sources at the turntable angle (deg), with G of CODATA 2022; null
  * where the rig's period or decay time is not measured, or where there is no equilibrium.
- * @throws NotYetError for cylinders.
  */
 export function predictEquilibriumRad(rig: RigDocument, angleDeg: number): number | null {
   const pendulum = pendulumOf(rig);
@@ -47,7 +46,6 @@ export function predictEquilibriumRad(rig: RigDocument, angleDeg: number): numbe
 /**
  * What one swing from far to near is worth, with G of CODATA 2022: exact torque at the exact equilibria. On the scale the angles count
  * from the middle of the two. Null without stations near and far, or without a measured period and decay time.
- * @throws NotYetError for cylinders.
  */
 export function predictSignal(rig: RigDocument): PredictedSignal | null {
   const pendulum = pendulumOf(rig);
@@ -78,7 +76,6 @@ export interface PredictedDeflection {
  * oscillator to each swing, with the frequency that the torque gradient gives it while the sources stand. Good for a strip, not for
  * an evaluation (the ringing is taken as small). Null where the rig's period or decay time is not measured, or where the sources go to an
  * angle at which the pendulum has no equilibrium.
- * @throws NotYetError for cylinders.
  */
 export function predictDeflection(
   rig: RigDocument,

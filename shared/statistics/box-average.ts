@@ -4,6 +4,8 @@ export interface BoxAverages {
   t: Float64Array;
   y: Float64Array;
   weight: Float64Array;
+  /** Root mean square distance of a box's samples from their mean time, in the unit of `t`. */
+  spreadS: Float64Array;
   /** Samples that went into a box. */
   samples: number;
 }
@@ -64,19 +66,23 @@ function collect(t: ArrayLike<number>, y: ArrayLike<number>, boxes: readonly Box
     t: new Float64Array(boxes.length),
     y: new Float64Array(boxes.length),
     weight: new Float64Array(boxes.length),
+    spreadS: new Float64Array(boxes.length),
     samples: 0,
   };
   boxes.forEach(([from, to], k) => {
     const [t0, y0] = [t[from] as number, y[from] as number];
-    let [time, value] = [0, 0];
+    let [time, square, value] = [0, 0, 0];
     for (let i = from; i < to; i += 1) {
-      time += (t[i] as number) - t0;
+      const since = (t[i] as number) - t0;
+      time += since;
+      square += since * since;
       value += (y[i] as number) - y0;
     }
     const count = to - from;
     result.t[k] = t0 + time / count;
     result.y[k] = y0 + value / count;
     result.weight[k] = count;
+    result.spreadS[k] = Math.sqrt(Math.max(0, square / count - (time / count) ** 2));
     result.samples += count;
   });
   return result;

@@ -80,7 +80,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     expect(download.suggestedFilename()).toMatch(/\.zip$/);
     const said: string[] = [];
     const refused: string[] = [];
-    const code = main([await savedAs(download)], { out: (text) => said.push(text), err: (text) => refused.push(text) });
+    const code = await main([await savedAs(download)], { out: (text) => said.push(text), err: (text) => refused.push(text) });
     expect({ code, refused }).toEqual({ code: 0, refused: [] });
     const result = JSON.parse(said.join('')) as EvaluationResult;
     const shown = readUncertain(await hand.reads('g-value', '×'));

@@ -1,6 +1,7 @@
 import type { BuildArchiveInput } from '@/shared/archive/build-archive';
 import type { StepRow } from '@/shared/archive/run-records';
 import type { RigDocument } from '@/shared/rig/document';
+import { attraction } from './night-attraction';
 import { wideRig } from './reference-rigs';
 
 /**
@@ -24,62 +25,24 @@ export interface NightPlan {
   unit?: string;
   /** Where the steps' rows differ from the plain ones. */
   row?: (row: StepRow) => Partial<StepRow>;
+  /** Swings in two moves: where the first one goes and how long from its start to that of the second, s. */
+  shaped?: (fromDeg: number, toDeg: number) => { viaDeg: number; afterS: number };
+  /** Instants at which the channel's clock shows what the rig's shows, s later. */
+  channelLateS?: number;
   protocol?: BuildArchiveInput['protocol'];
 }
 
-/** Looking up a global costs much more under the test runner than using it. */
-const { sqrt, sin, cos } = Math;
-
 export const nightStartUtcMs = Date.UTC(2026, 2, 1, 22, 0, 0);
-
-interface Mass {
-  massKg: number;
-  radiusM: number;
-}
-
-const gauss8 = [
-  [0.1834346424956498, 0.362683783378362],
-  [0.525532409916329, 0.3137066458778873],
-  [0.7966664774136267, 0.2223810344533745],
-  [0.9602898564975363, 0.1012285362903763],
-] as const;
-
-function pointsOf({ pendulum }: RigDocument): Mass[] {
-  const half = pendulum.beamLength.value / 2;
-  const beam = gauss8.flatMap(([x, w]) =>
-    [0.5, -0.5].flatMap((middle) =>
-      [1, -1].map((side) => ({ massKg: (pendulum.beamMass.value * w) / 4, radiusM: half * (middle + (side * x) / 2) })),
-    ),
-  );
-  return [1, -1].map((side) => ({ massKg: pendulum.ballMass.value, radiusM: side * pendulum.arm.value })).concat(beam);
-}
-
-/** Angular acceleration by the sources at ψ = turntable − pendulum (rad), rad/s2. */
-function attraction(rig: RigDocument, bigG: number, inertia: number): (psiRad: number) => number {
-  const points = pointsOf(rig);
-  const orbit = rig.sources.orbit?.value ?? 1;
-  const mass = rig.sources.shape === 'none' ? 0 : (rig.sources.mass?.value ?? 0);
-  const height = rig.sources.offset?.value ?? 0;
-  const scale = (bigG * mass) / inertia;
-  return (psiRad) => {
-    const sx = orbit * cos(psiRad);
-    const sy = orbit * sin(psiRad);
-    let torque = 0;
-    for (const { massKg, radiusM } of points) {
-      const across = sy * sy + height * height;
-      const near = sqrt((sx - radiusM) * (sx - radiusM) + across);
-      const far = sqrt((sx + radiusM) * (sx + radiusM) + across);
-      torque += massKg * radiusM * sy * (1 / (near * near * near) - 1 / (far * far * far));
-    }
-    return scale * torque;
-  };
-}
 
 interface Move {
   startS: number;
   durationS: number;
   fromDeg: number;
   toDeg: number;
+  /** From its end to the next move, s. */
+  restS: number;
+  /** Whether a dwell follows, or the second move of a shaped swing. */
+  dwells: boolean;
 }
 
 /** Angle of a trapezoidal move by its own formula: distance covered while accelerating, cruising and braking. */
@@ -97,14 +60,21 @@ function angleAt(move: Move, tS: number, limits: { speed: number; acceleration: 
 
 function movesOf(plan: NightPlan, limits: { speed: number; acceleration: number }): Move[] {
   let at = 10;
-  return plan.anglesDeg.slice(1).map((toDeg, k) => {
-    const fromDeg = plan.anglesDeg[k] as number;
+  const move = (fromDeg: number, toDeg: number, rest: (durationS: number) => { restS: number; dwells: boolean }): Move => {
     const distance = Math.abs(toDeg - fromDeg);
     const ramp = Math.min(limits.speed / limits.acceleration, Math.sqrt(distance / limits.acceleration));
     const durationS = distance === 0 ? 0 : ramp + distance / (limits.acceleration * ramp);
-    const move = { startS: at, durationS, fromDeg, toDeg };
-    at += durationS + plan.dwellS;
-    return move;
+    const made = { startS: at, durationS, fromDeg, toDeg, ...rest(durationS) };
+    at += durationS + made.restS;
+    return made;
+  };
+  const dwell = () => ({ restS: plan.dwellS, dwells: true });
+  return plan.anglesDeg.slice(1).flatMap((toDeg, k) => {
+    const fromDeg = plan.anglesDeg[k] as number;
+    if (plan.shaped === undefined) return [move(fromDeg, toDeg, dwell)];
+    const { viaDeg, afterS } = plan.shaped(fromDeg, toDeg);
+    const first = move(fromDeg, viaDeg, (durationS) => ({ restS: afterS - durationS, dwells: false }));
+    return [first, move(viaDeg, toDeg, dwell)];
   });
 }
 
@@ -130,12 +100,14 @@ export function night(plan: NightPlan): BuildArchiveInput {
     },
     rig,
     protocol: plan.protocol ?? { formatVersion: 1, name: 'Night', steps: [{ kind: 'home' }] },
-    steps: moves.flatMap((move, k) => rowsOf(move, plan, 2 * k + 1)),
+    steps: moves
+      .flatMap((move, k) => rowsOf(move, plan, 2 * k + 1))
+      .map((row, k) => ({ ...row, seq: k + 1, ...plan.row?.({ ...row, seq: k + 1 }) })),
     events: [],
     channels: [
       {
         info: { name: 'deflection', quantity: 'deflection', unit: plan.unit ?? 'rad', role: 'deflection' },
-        utcMs,
+        utcMs: utcMs.map((ms) => ms + 1000 * (plan.channelLateS ?? 0)),
         value: theta.map((angle, i) => reading(angle, ((utcMs[i] as number) - nightStartUtcMs) / 1000)),
       },
     ],
@@ -210,7 +182,7 @@ function rowsOf(move: Move, plan: NightPlan, seq: number): StepRow[] {
       good: true,
     },
   ];
-  return rows.map((row) => ({ ...row, ...plan.row?.(row) }));
+  return rows.slice(0, move.dwells ? 2 : 1);
 }
 
 function integrate(plan: NightPlan, rig: RigDocument, { angleDegAt, endS }: { angleDegAt: (tS: number) => number; endS: number }): Motion {

@@ -4,7 +4,9 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { buildArchive } from '@/shared/archive/build-archive';
 import { evaluationResultSchema, type EvaluationResult } from '@/shared/evaluation/result';
+import { monteCarlo, type TrialModel } from '@/shared/evaluation/monte-carlo';
 import { main } from '@/server/boot/evaluate';
+import { createTrialCrew } from '@/server/boot/parallel-trials';
 import { writeArchiveFolder, zipArchive } from '@/server/evaluation/archive-files';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import { alternatingAngles, night } from '../../support/night';
@@ -21,17 +23,17 @@ function archiveOnDisk(): { folder: string; zip: string } {
   return { folder, zip };
 }
 
-function run(...args: string[]): { code: number; out: string; err: string } {
+async function run(...args: string[]): Promise<{ code: number; out: string; err: string }> {
   const said = { out: '', err: '' };
-  const code = main(args, { out: (text) => void (said.out += text), err: (text) => void (said.err += text) });
+  const code = await main(args, { out: (text) => void (said.out += text), err: (text) => void (said.err += text) });
   return { code, ...said };
 }
 
 describe('evaluate', () => {
   const { folder, zip } = archiveOnDisk();
 
-  test('prints one JSON object of the published form and nothing else, the same for folder and ZIP', () => {
-    const [fromFolder, fromZip] = [run(folder), run(zip)];
+  test('prints one JSON object of the published form and nothing else, the same for folder and ZIP', async () => {
+    const [fromFolder, fromZip] = [await run(folder), await run(zip)];
     expect(fromFolder).toMatchObject({ code: 0, err: '' });
     expect(fromZip.out).toBe(fromFolder.out);
     const result = JSON.parse(fromFolder.out) as EvaluationResult;
@@ -40,21 +42,21 @@ describe('evaluate', () => {
     expect(result.chain).toEqual({ events: 1, valid: true });
   });
 
-  test('works as a process of its own', () => {
+  test('works as a process of its own', async () => {
     const child = spawnSync(process.execPath, ['--import', 'tsx', 'server/boot/evaluate.ts', zip], {
       encoding: 'utf8',
       maxBuffer: 1 << 26,
     });
     expect(child.status).toBe(0);
     expect(child.stderr).toBe('');
-    expect(JSON.parse(child.stdout)).toEqual(JSON.parse(run(zip).out));
+    expect(JSON.parse(child.stdout)).toEqual(JSON.parse((await run(zip)).out));
   }, 60_000);
 
-  test('says which file was changed and ends with 2', () => {
+  test('says which file was changed and ends with 2', async () => {
     const { folder: tampered } = archiveOnDisk();
     const path = join(tampered, 'steps.csv');
     writeFileSync(path, readFileSync(path, 'utf8').replace('done', 'late'));
-    expect(run(tampered)).toEqual({
+    expect(await run(tampered)).toEqual({
       code: 2,
       out: '',
       err: 'evaluate: steps.csv: the SHA-256 of the file is not the one in datapackage.json: it was changed\n',
@@ -68,18 +70,34 @@ describe('evaluate', () => {
     ['an unknown option', [folder, '--colour'], "Unknown option '--colour'"],
     ['an unknown method', [folder, '--method', 'guess'], '--method guess: there are equilibrium'],
     ['a method that is not built', [folder, '--method', 'period'], '[not-yet]'],
-    ['a bound, which is not built', [folder, '--bound', '1e-6'], '[not-yet]'],
     ['a bound that is none', [folder, '--bound', 'wide'], '--bound wide: a positive angle'],
     ['trials that are none', [folder, '--trials', '-5'], '--trials'],
     ['a channel that is not there', [folder, '--channel', 'laser'], 'there is no channel "laser"'],
     ['a file that is no archive', ['package.json'], 'not a readable ZIP'],
-  ])('refuses %s with 2 and a sentence', (_what, args, message) => {
-    const { code, out, err } = run(...args);
+  ])('refuses %s with 2 and a sentence', async (_what, args, message) => {
+    const { code, out, err } = await run(...args);
     expect({ code, out }).toEqual({ code: 2, out: '' });
     expect(err).toContain(message);
   });
 
-  test('takes a number of trials and a channel', () => {
-    expect(run(folder, '--trials', '0', '--channel', 'deflection', '--method', 'equilibrium').code).toBe(0);
+  test('takes a number of trials and a channel', async () => {
+    const { code, out } = await run(folder, '--trials', '0', '--channel', 'deflection', '--method', 'equilibrium');
+    expect(code).toBe(0);
+    expect((JSON.parse(out) as EvaluationResult).monteCarlo).toBeNull();
+  });
+
+  test('draws the same trials in one thread and in several', async () => {
+    const model: TrialModel = {
+      bigG: 6.6743e-11,
+      inputs: [{ input: 'sources.mass', value: 1.6, u: 0.01, law: { kind: 'normal' }, group: null, logSlope: -1 / 1.6 }],
+      core: null,
+    };
+    const crew = createTrialCrew(250_000);
+    const parallel = await crew.run(model);
+    await crew.close();
+    expect(parallel).toEqual(monteCarlo(model, 250_000));
+    // exp of a normal exponent of 1/160: mean and spread of the log-normal law.
+    expect(parallel?.G_mean).toBeCloseTo(6.6743e-11 * Math.exp(0.5 / 160 ** 2), 14);
+    expect((parallel?.G_u ?? 0) / 6.6743e-11).toBeCloseTo(1 / 160, 4);
   });
 });

@@ -112,7 +112,6 @@ describe('unusable input ends with 2, nothing on stdout and the reason on stderr
     ...demoRigWide,
     motion: { ...(demoRigWide.motion as NonNullable<RigDocument['motion']>), keepOut: [[40, 60]] },
   };
-  const cylinder = { ...demoRigWide, sources: { ...demoRigWide.sources, shape: 'cylinder', height: { value: 0.05, u: 0.001, unit: 'm' } } };
   test.each<[string, () => string[], string]>([
     ['nothing given', () => [], 'No protocol was given'],
     ['file and template', () => [file('a.json', pairs({ kind: 'dwell', for_s: 600 })), '--template', 'still'], 'one of the two'],
@@ -147,7 +146,6 @@ describe('unusable input ends with 2, nothing on stdout and the reason on stderr
       () => ['--template', 'still', '--rig', file('r.json', { ...demoRigWide, stations: { near: { value: 20, u: 0.05, unit: 'rad' } } })],
       'stations.near.unit',
     ],
-    ['a rig of cylinders', () => ['--template', 'still', '--rig', file('cyl.json', cylinder)], 'not-yet'],
   ])('%s', (_, args, words) => {
     const { code, stdout, stderr } = plan(...args());
     expect({ code, stdout }).toEqual({ code: 2, stdout: '' });

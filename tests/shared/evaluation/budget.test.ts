@@ -149,6 +149,32 @@ describe('the budget', () => {
     expect(two / one).toBeCloseTo(4, 1);
   });
 
+  test('puts the second order where the first vanishes: height and station angles at the greatest torque', () => {
+    const rig = withRig(wideRig(), (r) => {
+      Object.assign(r.sources.offset as object, { u: 0.005 });
+      r.stations.near = { value: near, u: 0.1, unit: 'deg' };
+    });
+    const { result } = evaluateNight({ ...wide, rig });
+    // Torque ratio 0.9895428 at 5 mm (physics.md A3): G'' u²/2 = 1.05 %, with the standard deviation √2 of a square.
+    expect(line(result, 'sources.offset').contribution / 6.6743e-11).toBeCloseTo(Math.SQRT2 * 0.01057, 3);
+    // −1.706e-5 of the torque for 0.1° (A3); G takes half of it, because only near is off.
+    expect(line(result, 'stations.near').contribution / 6.6743e-11).toBeGreaterThan(0.7 * Math.SQRT2 * 0.853e-5);
+  });
+
+  test('agrees with Monte Carlo trials where it is straight, and is corrected by them where it is not', () => {
+    const { result } = evaluateNight({ ...wide, rig: uncertain }, { trials: 50_000 });
+    const { G_mean, G_u, interval95, trials } = result.monteCarlo as NonNullable<EvaluationResult['monteCarlo']>;
+    expect(trials).toBe(50_000);
+    expect(relativeDifference(G_u, result.G?.u ?? NaN)).toBeLessThan(0.02);
+    expect(Math.abs(G_mean / 6.6743e-11 - 1)).toBeLessThan(2e-4);
+    expect(relativeDifference(interval95[1] - interval95[0], 2 * 1.96 * G_u)).toBeLessThan(0.02);
+    const high = withRig(wideRig(), (r) => void Object.assign(r.sources.offset as object, { u: 0.005 }));
+    const bent = evaluateNight({ ...wide, rig: high }, { trials: 50_000 }).result.monteCarlo;
+    // The mean of a square is its variance: + 1.05 % at 5 mm, and no trial lies below.
+    expect((bent?.G_mean ?? 0) / 6.6743e-11 - 1).toBeCloseTo(0.0106, 3);
+    expect((bent?.interval95[0] ?? 0) / 6.6743e-11).toBeGreaterThan(1 - 1e-6);
+  });
+
   test('leaves the lever out of an angle channel and takes it into a spot channel', () => {
     const inputs = (plan: NightPlan) => (evaluateNight(plan).result.budget ?? []).map(({ input }) => input);
     expect(inputs(wide)).not.toContain('lever.distance');

@@ -70,13 +70,6 @@ describe('methods and rigs that this version does not know', () => {
     expect(() => evaluateNight(wide, { method })).toThrow(expect.objectContaining({ code: 'not-yet' }) as Error);
   });
 
-  test('cylinders are refused as not yet built', () => {
-    const rig = withRig(wideRig(), (r) => (r.sources = { ...r.sources, shape: 'cylinder', height: { value: 0.05, u: 0, unit: 'm' } }));
-    expect(() => evaluateNight(wide, {}, (records) => ({ ...records, rig }))).toThrow(
-      expect.objectContaining({ code: 'not-yet' }) as Error,
-    );
-  });
-
   test('a difference that no G could make between the stations is refused', () => {
     // Supposed 1.5 degrees apart on one side, near and far pull almost alike, so the observed difference would need a huge G.
     const rig = withRig(wideRig(), (r) => {

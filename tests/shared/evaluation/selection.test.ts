@@ -130,7 +130,7 @@ describe('what cannot be computed is null', () => {
     const result = evaluateNight({ ...wide, rig, reading: (_angle, t) => 3e-5 + 1e-9 * t }).result;
     expect(result).toMatchObject({ G: null, budget: null });
     expect(result.reversal_rad?.value).toBeCloseTo(0, 12);
-    expect(result.reversal_rad).toMatchObject({ count: 7, equivalence: null });
+    expect(result.reversal_rad).toMatchObject({ count: 7, equivalence: { bound_rad: null, p: null, equivalent: null } });
     expect(result.period_s).toEqual({ value: 420, u: 0 });
   });
 
@@ -152,6 +152,22 @@ describe('what cannot be computed is null', () => {
     const result = evaluateNight({ ...wide, rig, reading: () => (zero += 2e-7 * normal()) }).result;
     expect(result.period_s).toEqual({ value: 420, u: expect.closeTo(0.1, 12) as number });
     expect(codes(result)).toEqual(['decay-unknown']);
+  });
+
+  test('an empty control is held against what the parts that turn along must give, within a thousandth of the loaded signal', () => {
+    const normal = normalDeviates(17);
+    const rig = withRig(wideRig(), (r) => {
+      const metres = (value: number) => ({ value, u: 0, unit: 'm' as const });
+      const cradle = { mass: { value: 0.06, u: 0, unit: 'kg' as const }, angle: { value: 0, u: 0, unit: 'deg' as const } };
+      r.sources = { ...r.sources, shape: 'none', extra: [{ label: 'cradle', orbit: metres(0.125), offset: metres(-0.04), ...cradle }] };
+    });
+    const reading = (_: number, tS: number) => (Math.floor(tS / 850) % 2 === 0 ? 2.5e-5 : -2.5e-5) + 2e-6 * normal();
+    const of = (options = {}) => evaluateNight({ ...wide, rig, reading }, options).result.reversal_rad?.equivalence;
+    // 2.1 % of the signal of 2.3738 mrad (practice.md 1.7).
+    expect((of()?.expected_rad ?? 0) / 2.373825686861e-3).toBeCloseTo(0.021, 3);
+    expect((of()?.bound_rad ?? 0) / 2.373825686861e-6).toBeCloseTo(1.021, 3);
+    expect(of({ boundRad: 2e-5 })).toMatchObject({ bound_rad: 2e-5, equivalent: true });
+    expect(of({ boundRad: 1e-8 })?.equivalent).toBe(false);
   });
 
   test('three dwells give a value without an uncertainty, and say so', () => {

@@ -130,11 +130,6 @@ describe('what the geometry of a rig holds', () => {
     const empty = withRig(wideRig(), (r) => (r.sources = { shape: 'none' }));
     expect(torquePerG(geometryOf(empty), 0.35)).toBe(0);
   });
-
-  test('cylinders are refused as not yet built', () => {
-    const rig = withRig(wideRig(), (r) => (r.sources.shape = 'cylinder'));
-    expect(() => geometryOf(rig)).toThrow(expect.objectContaining({ code: 'not-yet' }) as Error);
-  });
 });
 
 const table = checkValues();

@@ -45,12 +45,6 @@ describe('the signal', () => {
     expect(predictSignal({ ...wide, lever: undefined })?.signalM).toBeNull();
     expect(predictSignal(withoutSources(wide))?.signalRad).toBeCloseTo(0, 15);
   });
-
-  test('cylinders are not built yet', () => {
-    expect(() => predictSignal({ ...wide, sources: { ...wide.sources, shape: 'cylinder' } })).toThrow(
-      expect.objectContaining({ code: 'not-yet' }) as Error,
-    );
-  });
 });
 
 /** The exact pendulum, I θ̈ = −2Iγ θ̇ − κ θ + G g(φ − θ), by fixed steps of Runge and Kutta: what the prediction is held against. */

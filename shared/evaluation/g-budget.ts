@@ -1,0 +1,155 @@
+import { RAD_PER_DEG } from '../physics/constants';
+import { equilibriumRad } from '../physics/equilibrium';
+import { leverOf } from '../physics/lever';
+import { inertiaKgM2 } from '../physics/oscillator';
+import { geometryOf } from '../physics/torque';
+import type { RigDocument } from '../rig/document';
+import type { Law } from '../statistics/draws';
+import type { Analysis } from './analysis';
+import { relativeTorqueChange } from './axis-offset';
+import { budgetOf, derivative, type Budget, type BudgetTerm, type ObservedTerm } from './budget';
+import { budgetInputs, derivativeStep } from './budget-inputs';
+import { reread } from './channel-scale';
+import type { Known } from './free-oscillator';
+import { gSystem } from './g-system';
+import type { TrialModel } from './monte-carlo';
+import { centreOf } from './ring-down-fit';
+import { NoSolutionError, solveG } from './solve-g';
+import type { TrialCore } from './trial-core';
+
+/** The budget of G by the equilibrium method; null without a G or without a scatter to judge the difference by. */
+export function budgetFor(rig: RigDocument, analysis: Analysis): Budget | null {
+  const { solution, reversal, free } = analysis;
+  if (solution === null || reversal === null || reversal.known === null) return null;
+  const stations = [...new Set(reversal.members.map(({ segment }) => analysis.segments[segment]?.window.stationKey ?? null))].filter(
+    (key) => key !== null,
+  );
+  const gOf = gFunction(rig, analysis, solution.bigG);
+  return budgetOf({
+    rig,
+    bigG: solution.bigG,
+    gOf: (supposed) => gOf({ rig: supposed }),
+    stations,
+    lever: analysis.scale.kind === 'spot',
+    observed: observedTerms(gOf, { reversal: reversal.known, period: free.period, decayTime: free.decayTime }),
+    axisOffset: axisOffsetOf(rig),
+  });
+}
+
+const relativeStep = 1e-4;
+
+function observedTerms(gOf: GOf, known: { reversal: Known; period: Known; decayTime: Known | null }): ObservedTerm[] {
+  const { reversal, period, decayTime } = known;
+  const byReversal = derivative(
+    (step) => gOf({ reversalRad: reversal.value + step }),
+    relativeStep * Math.abs(reversal.value) || relativeStep,
+  );
+  const decayTimeS = decayTime?.value ?? Infinity;
+  const byPeriod = derivative((step) => gOf({ periodS: period.value + step, decayTimeS }), relativeStep * period.value);
+  const terms: ObservedTerm[] = [
+    { input: 'reversal_rad', known: reversal, sensitivity: byReversal },
+    { input: 'period_s', known: period, sensitivity: byPeriod },
+  ];
+  if (decayTime === null) return terms;
+  const byDecay = derivative((step) => gOf({ periodS: period.value, decayTimeS: decayTime.value + step }), relativeStep * decayTime.value);
+  return [...terms, { input: 'decayTime_s', known: decayTime, sensitivity: byDecay }];
+}
+
+/** G as a function of what it is computed from; each key left out stays as it was observed. */
+type GOf = (changes: { rig?: RigDocument; reversalRad?: number; periodS?: number; decayTimeS?: number }) => number;
+
+/** G of the same observations for a rig, a difference or a pendulum supposed otherwise. */
+function gFunction(rig: RigDocument, analysis: Analysis, bigG: number): GOf {
+  const { segments, found, measured, free, reversal, scale } = analysis;
+  const centres = segments.map((_, i) => (found === null ? 0 : centreOf(found, i).value));
+  return ({ rig: supposed = rig, reversalRad, periodS, decayTimeS }) => {
+    const lever = leverOf(supposed);
+    const rereadRad = (reversal?.members ?? []).reduce(
+      (sum, { segment, weight }) => sum + weight * reread(scale, centres[segment] as number, lever),
+      0,
+    );
+    const system = gSystem({
+      rig: supposed,
+      stationsOf: rig,
+      segments,
+      found,
+      measured,
+      free,
+      reversal,
+      reversalRad: reversalRad ?? (scale.kind === 'angle' ? (reversal?.value ?? 0) : rereadRad),
+      ...(periodS === undefined || decayTimeS === undefined ? {} : { oscillator: { periodS, decayTimeS } }),
+    });
+    if (system === null) throw new NoSolutionError('there is no source on the turntable');
+    return solveG(system, bigG).bigG;
+  };
+}
+
+function axisOffsetOf(rig: RigDocument): { value: number; u: number; relative: number } | null {
+  const offset = rig.axis?.offset;
+  const near = rig.stations.near?.value;
+  const far = rig.stations.far?.value;
+  if (offset === undefined || near === undefined || far === undefined) return null;
+  const stations = { nearRad: near * RAD_PER_DEG, farRad: far * RAD_PER_DEG };
+  return {
+    value: offset.value,
+    u: offset.u,
+    relative: relativeTorqueChange(geometryOf(rig), stations, Math.hypot(offset.value, offset.u)),
+  };
+}
+
+/** u of κ = I ω₀², N m/rad: from the frequency and from everything that the inertia is made of. */
+export function kappaU(rig: RigDocument, omega0Squared: Known): number {
+  const byGroup = new Map<string, number>();
+  for (const { path, quantity, shifted } of budgetInputs(rig, { stations: [], lever: false })) {
+    if (!path.startsWith('pendulum.')) continue;
+    const step = derivativeStep(quantity);
+    const slope = (inertiaKgM2(shifted(step)) - inertiaKgM2(shifted(-step))) / (2 * step);
+    const key = quantity.group === undefined ? path : `group ${quantity.group}`;
+    byGroup.set(key, (byGroup.get(key) ?? 0) + slope * quantity.u);
+  }
+  const inertiaU = Math.hypot(0, ...byGroup.values());
+  return Math.hypot(inertiaKgM2(rig) * omega0Squared.u, inertiaU * omega0Squared.value);
+}
+
+/** What the Monte Carlo trials need; null without a budget. */
+export function trialModelOf(rig: RigDocument, budget: Budget | null, analysis: Analysis): TrialModel | null {
+  const { solution } = analysis;
+  if (budget === null || solution === null || solution.bigG === 0) return null;
+  return {
+    bigG: solution.bigG,
+    inputs: budget.terms.map((one) => ({
+      input: one.line.input,
+      value: one.line.value,
+      u: one.line.u,
+      law: lawOf(one),
+      group: one.group,
+      logSlope: one.slope / solution.bigG,
+    })),
+    core: coreOf(rig, analysis),
+  };
+}
+
+function lawOf({ nu, rectangular }: BudgetTerm): Law {
+  if (rectangular) return { kind: 'rectangular' };
+  return Number.isFinite(nu) ? { kind: 't', nu } : { kind: 'normal' };
+}
+
+function coreOf(rig: RigDocument, { reversal, solution, free, system }: Analysis): TrialCore | null {
+  const { near, far } = rig.stations;
+  if (reversal === null || solution === null || system === null || near === undefined || far === undefined) return null;
+  const { geometry } = system;
+  const restAt = (angleDeg: number) =>
+    equilibriumRad({ geometry, kappa: solution.kappa, bigG: solution.bigG, phiRad: angleDeg * RAD_PER_DEG });
+  return {
+    geometry: { ...geometry, pairs: geometry.pairs.map(({ cylinder: _, ...pair }) => pair) },
+    ballRadiusM: rig.pendulum.ballRadius.value,
+    extraInertia: rig.pendulum.extraInertia?.value ?? 0,
+    nearDeg: near.value,
+    farDeg: far.value,
+    nearRad: restAt(near.value),
+    farRad: restAt(far.value),
+    reversalRad: reversal.value,
+    periodS: free.period.value,
+    decayTimeS: free.decayTime?.value ?? Infinity,
+  };
+}

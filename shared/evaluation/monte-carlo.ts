@@ -1,0 +1,123 @@
+import { seededStreams } from '../physics/seeded-gaussian';
+import { drawn, type Law } from '../statistics/draws';
+import { gOfCore, setterOf, type Setter, type TrialCore } from './trial-core';
+
+/** Propagation of distributions (JCGM 101:2008): G of inputs drawn from what is known of each. Plain data, so that threads can share it. */
+
+export interface TrialInput {
+  input: string;
+  value: number;
+  u: number;
+  law: Law;
+  /** Inputs of one group share their deviate. */
+  group: string | null;
+  /** ∂ ln G/∂input of the whole evaluation. */
+  logSlope: number;
+}
+
+export interface TrialModel {
+  bigG: number;
+  inputs: TrialInput[];
+  /** Null where G answers to its inputs in proportion closely enough. */
+  core: TrialCore | null;
+}
+
+export interface MonteCarloResult {
+  trials: number;
+  G_mean: number;
+  G_u: number;
+  interval95: [number, number];
+}
+
+const seed = 20220;
+/** Trials that share a stream of random numbers, so that the outcome does not depend on how they are spread over threads. */
+export const trialsPerBlock = 10_000;
+
+/** G of the trials in the blocks from `fromBlock` to before `toBlock`, `trials` in all the blocks together. */
+export function drawTrials(model: TrialModel, { trials, fromBlock, toBlock }: TrialSpan): Float64Array {
+  const values = new Float64Array(Math.min(trials, toBlock * trialsPerBlock) - fromBlock * trialsPerBlock);
+  const trial = trialOf(model);
+  const streams = seededStreams(seed, toBlock).slice(fromBlock);
+  for (let k = 0; k < values.length; k += 1) {
+    const stream = streams[Math.floor(k / trialsPerBlock)] as (typeof streams)[number];
+    values[k] = trial((law) => drawn(law, stream));
+  }
+  return values;
+}
+
+export interface TrialSpan {
+  trials: number;
+  fromBlock: number;
+  toBlock: number;
+}
+
+export const blocksOf = (trials: number) => Math.ceil(trials / trialsPerBlock);
+
+/** Mean, standard deviation and probabilistically symmetric 95 % interval. Sorts the values in place. */
+export function summarised(values: Float64Array): MonteCarloResult {
+  const trials = values.length;
+  const first = values[0] as number;
+  const mean = first + values.reduce((sum, value) => sum + (value - first), 0) / trials;
+  const squares = values.reduce((sum, value) => sum + (value - mean) ** 2, 0);
+  values.sort();
+  const at = (share: number) => values[Math.min(trials - 1, Math.max(0, Math.round(share * trials - 0.5)))] as number;
+  return { trials, G_mean: mean, G_u: Math.sqrt(squares / Math.max(1, trials - 1)), interval95: [at(0.025), at(0.975)] };
+}
+
+/** All trials in this thread; null for none. */
+export function monteCarlo(model: TrialModel, trials: number): MonteCarloResult | null {
+  return trials === 0 ? null : summarised(drawTrials(model, { trials, fromBlock: 0, toBlock: blocksOf(trials) }));
+}
+
+interface Part {
+  input: TrialInput;
+  set: Setter | null;
+  /** What the closed form lacks of the whole evaluation's ∂ ln G/∂input. */
+  lacking: number;
+  /** Position of the deviate. */
+  draw: number;
+}
+
+function trialOf(model: TrialModel): (draw: (law: Law) => number) => number {
+  const core = model.core === null ? null : structuredClone(model.core);
+  const reference = core === null ? 1 : gOfCore(core);
+  const { laws, parts } = partsOf(model, core, reference);
+  const deviates = new Float64Array(laws.length);
+  return (draw) => {
+    for (let k = 0; k < laws.length; k += 1) deviates[k] = draw(laws[k] as Law);
+    let exponent = 0;
+    for (const { input, set, lacking, draw: k } of parts) {
+      const change = input.u * (deviates[k] as number);
+      set?.(input.value + change);
+      exponent += lacking * change;
+    }
+    return model.bigG * (core === null ? 1 : gOfCore(core) / reference) * Math.exp(exponent);
+  };
+}
+
+function partsOf(model: TrialModel, core: TrialCore | null, reference: number): { laws: Law[]; parts: Part[] } {
+  const laws: Law[] = [];
+  const groups = new Map<string, number>();
+  const parts = model.inputs
+    .filter(({ u }) => u > 0)
+    .map((input): Part => {
+      const set = core === null ? null : setterOf(core, input.input);
+      const known = input.group === null ? undefined : groups.get(input.group);
+      const draw = known ?? laws.push(input.law) - 1;
+      if (input.group !== null) groups.set(input.group, draw);
+      return { input, set, draw, lacking: input.logSlope - (core === null || set === null ? 0 : slopeOf(core, input, { set, reference })) };
+    });
+  return { laws, parts };
+}
+
+/** ∂ ln/∂input of the closed form; the core is left as it was. */
+function slopeOf(core: TrialCore, { value, u }: TrialInput, { set, reference }: { set: Setter; reference: number }): number {
+  const step = 1e-3 * u;
+  const at = (x: number) => {
+    set(x);
+    return gOfCore(core);
+  };
+  const slope = (at(value + step) - at(value - step)) / (2 * step * reference);
+  set(value);
+  return slope;
+}

@@ -1,0 +1,74 @@
+import type { Archive } from '../archive/read-archive';
+import type { ArchiveWarning } from '../archive/archive-types';
+import { RAD_PER_DEG } from '../physics/constants';
+import { geometryOf, torquePerG } from '../physics/torque';
+import type { Analysis } from './analysis';
+
+/** From this many near and far dwells on their scatter says something. */
+const enoughDwells = 6;
+const greatestDisagreement = 3;
+
+export const hasSwings = ({ steps }: Archive) => steps.some(({ kind }) => kind === 'swing');
+
+const noReversal: ArchiveWarning = {
+  code: 'few-dwells',
+  message: 'No near and far dwell that count follow each other, so there is neither a difference nor a G.',
+};
+
+/** What a reader of the result must know of how it came about. */
+export function warningsOf(archive: Archive, { reversal, free, solution }: Analysis): ArchiveWarning[] {
+  const warnings = oscillatorWarnings(free);
+  if (reversal === null) return hasSwings(archive) ? [...warnings, noReversal] : warnings;
+  const dwells = reversal.members.length;
+  if (dwells < enoughDwells) {
+    const consequence =
+      reversal.known === null ? 'their scatter gives no uncertainty, so G has none' : 'their scatter gives a rough uncertainty only';
+    warnings.push({ code: 'few-dwells', message: `Only ${dwells} dwells count: ${consequence}.` });
+  }
+  if (reversal.notAlternating) {
+    warnings.push({
+      code: 'not-alternating',
+      message: 'The dwells that count do not alternate between near and far, so a polynomial drift was removed instead of ABA windows.',
+    });
+  }
+  const { rig } = archive;
+  const near = rig.stations.near;
+  if (solution !== null && near !== undefined && torquePerG(geometryOf(rig), near.value * RAD_PER_DEG) < 0) {
+    warnings.push({
+      code: 'near-not-positive',
+      message: 'The torque at stations.near is negative; near should be the station with positive torque.',
+    });
+  }
+  if (solution !== null && solution.bigG < 0) {
+    warnings.push({
+      code: 'sign',
+      message: 'Near minus far has the wrong sign, so G came out negative: look at lever.sense and at the stations.',
+    });
+  }
+  return warnings;
+}
+
+function oscillatorWarnings(free: Analysis['free']): ArchiveWarning[] {
+  const warnings: ArchiveWarning[] = [];
+  const { omega, gamma } = free.disagreement;
+  if (omega !== null && omega > greatestDisagreement) {
+    warnings.push({
+      code: 'period-disagrees',
+      message: `The ring-down and measured.period_s of rig.json disagree by ${omega.toFixed(1)} u; their weighted mean was used.`,
+    });
+  }
+  if (gamma !== null && gamma > greatestDisagreement) {
+    warnings.push({
+      code: 'decay-disagrees',
+      message: `The ring-down and measured.decayTime_s of rig.json disagree by ${gamma.toFixed(1)} u; their weighted mean was used.`,
+    });
+  }
+  if (free.decayTime === null) {
+    warnings.push({
+      code: 'decay-unknown',
+      message:
+        'Neither the dwells nor measured.decayTime_s tell how fast the ringing dies away, so the torsion constant was taken without damping: it is too small.',
+    });
+  }
+  return warnings;
+}

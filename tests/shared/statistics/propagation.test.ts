@@ -1,0 +1,57 @@
+import { seededStreams, type GaussianSource } from '@/shared/physics/seeded-gaussian';
+import { summarised } from '@/shared/evaluation/monte-carlo';
+import { drawn, type Law } from '@/shared/statistics/draws';
+import { equivalence } from '@/shared/statistics/equivalence';
+import { relativeDifference } from '../../support/check-data';
+
+/** Worked examples of JCGM 101:2008, 9 (expected values exact where a formula is given), and the test of equivalence of physics.md L1. */
+
+function propagated(seed: number, model: (draw: (law: Law) => number) => number) {
+  const [source] = seededStreams(seed, 1) as [GaussianSource];
+  return summarised(Float64Array.from({ length: 200_000 }, () => model((law) => drawn(law, source))));
+}
+
+const normal: Law = { kind: 'normal' };
+const rectangular: Law = { kind: 'rectangular' };
+const sumOf = (draw: (law: Law) => number, laws: readonly [Law, number][]) => laws.reduce((sum, [law, u]) => sum + u * draw(law), 0);
+
+test.each<[string, [Law, number][], number, number]>([
+  ['four normal quantities (9.2.2)', Array.from({ length: 4 }, () => [normal, 1]), 2, 3.91992796908],
+  ['four rectangular ones (9.2.3)', Array.from({ length: 4 }, () => [rectangular, 1]), 2, 2 * Math.sqrt(3) * (2 - 0.6 ** 0.25)],
+  ['three rectangular ones and one ten times as wide (9.2.4)', [1, 1, 1, 10].map((u) => [rectangular, u]), Math.sqrt(103), 17.0],
+])('the sum of %s', (_name, laws, u, half) => {
+  const found = propagated(7, (draw) => sumOf(draw, laws));
+  expect(relativeDifference(found.G_u, u)).toBeLessThan(0.006);
+  expect(relativeDifference(found.interval95[1], half)).toBeLessThan(0.012);
+  expect(relativeDifference(found.interval95[0], -half)).toBeLessThan(0.012);
+});
+
+test('mass calibration (9.3): the linear budget gives 0.0539 mg, the distributions 0.0754 mg', () => {
+  // δm = (m_R + δm_R)[1 + (ρa − ρa0)(1/ρW − 1/ρR)] − m_nominal, kg and kg/m3; limits ± 0.1, ± 1000, ± 50.
+  const found = propagated(3, (draw) => {
+    const mass = 100_000 + 0.05 * draw(normal);
+    const small = 1.234 + 0.02 * draw(normal);
+    const air = 1.2 + (0.1 / Math.sqrt(3)) * draw(rectangular);
+    const weight = 8000 + (1000 / Math.sqrt(3)) * draw(rectangular);
+    const reference = 8000 + (50 / Math.sqrt(3)) * draw(rectangular);
+    return (mass + small) * (1 + (air - 1.2) * (1 / weight - 1 / reference)) - 100_000;
+  });
+  expect(found.G_mean).toBeCloseTo(1.234, 3);
+  expect(relativeDifference(found.G_u, 0.0754)).toBeLessThan(0.01);
+  expect(found.interval95[0]).toBeCloseTo(1.083, 2);
+  expect(found.interval95[1]).toBeCloseTo(1.383, 2);
+});
+
+test.each([5, 12.5])('a mean from few repetitions has the spread √(ν/(ν − 2)) of Student, ν %d', (nu) => {
+  expect(relativeDifference(propagated(11, (draw) => draw({ kind: 't', nu })).G_u, Math.sqrt(nu / (nu - 2)))).toBeLessThan(0.02);
+});
+
+test('a null that is shown and one that is merely not significant', () => {
+  const data = { value: 0.02416666666667, u: 0.02882702681075, nu: 11 };
+  const shown = equivalence(data, 0.15);
+  expect(relativeDifference(shown.p, 0.0005633291568629)).toBeLessThan(1e-9);
+  expect(shown.equivalent).toBe(true);
+  const notShown = equivalence(data, 0.06);
+  expect(relativeDifference(notShown.p, 0.1198469289756)).toBeLessThan(1e-9);
+  expect(notShown.equivalent).toBe(false);
+});
