@@ -108,6 +108,7 @@ export const isMine = ({ context, event }: Told) =>
   'link' in event && 'commandId' in event.link && event.link.commandId === context.run.step?.motion?.commandId;
 export const isAhead = ({ context, event }: Told) =>
   'link' in event && 'commandId' in event.link && event.link.commandId === context.run.ahead?.commandId;
+export const endedAhead = (told: Told) => isAhead(told) && told.event.type === 'link.motion-ended' && told.event.link.cause === 'done';
 export const isCancelled = ({ context }: Told) => context.run.ahead?.cancelled === true;
 export const bootedAnew = ({ context, event }: Told) =>
   event.type === 'link.ready' && hasRestarted(context.run, event.link.controller.bootId);

@@ -30,6 +30,7 @@ import {
   bootedAnew,
   chart,
   comingToRest,
+  endedAhead,
   explainController,
   explainHomeFailure,
   explainNoReturn,
@@ -131,7 +132,11 @@ const machine = chart.createMachine({
           { guard: isAhead, target: 'holding', actions: act(takeAhead, beginHold) },
           strangeMotion,
         ],
-        'link.motion-ended': { guard: isAhead, actions: act(dropAhead) },
+        'link.motion-ended': [
+          // Its beginning was never told: the ring of events had gone on before it could be read again.
+          { guard: endedAhead, target: 'choosing', actions: act(takeAhead, noteEnded, finishMotion, chooseNext) },
+          { guard: isAhead, actions: act(dropAhead) },
+        ],
         'link.refused': refusals(isAhead, dropAhead),
         deadline: [
           { guard: isOverdue, ...holdsFor('no-answer', 'The controller accepted the move and never told that it began.') },

@@ -2,7 +2,7 @@ import type { Instant } from '../interfaces/clock';
 import { startRun } from './beginning';
 import type { Draft } from './draft';
 import type { InterruptionCause, KnownController, RunEvent } from './run-context';
-import { finishMotion, reachedTarget, takeAhead } from './motions';
+import { finishMotion, reachedTarget, takeAhead, untoldEdge } from './motions';
 import { slipRefusal } from './position';
 import { predictEndUtcMs } from './predicted-end';
 import { beginHome, beginStanding, beginSwing, chooseNext, standingEndUtcMs, toleranceDeg } from './steps';
@@ -229,7 +229,11 @@ function closeForRest(draft: Draft): void {
   if (step.motion === null) return closeStanding(draft, angleDeg);
   step.row.angleEndDeg ??= angleDeg;
   if (reachedTarget(draft)) {
-    step.row.endUtcMs ??= Math.min(draft.nowUtcMs, step.row.startUtcMs + step.motion.durationMs);
+    if (step.row.endUtcMs === null) {
+      const fromUtcMs = Math.min(draft.nowUtcMs, step.row.startUtcMs + step.motion.durationMs);
+      const { utcMs, uS } = untoldEdge(draft, 'ended', { fromUtcMs, toUtcMs: draft.nowUtcMs });
+      Object.assign(step.row, { endUtcMs: utcMs, uEndS: uS });
+    }
     finishMotion(draft);
     context.step = null;
     return;

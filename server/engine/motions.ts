@@ -38,7 +38,7 @@ export function noteBegan(draft: Draft): void {
   const { context, event } = draft;
   const { step, motion } = draft;
   const seen = event.type === 'link.motion-began';
-  const stamp = seen ? inOrder(draft.stamp, step.row) : { utcMs: motion.startUtcMs ?? step.row.startUtcMs, uS: context.uPlanS };
+  const stamp = seen ? inOrder(draft.stamp, step.row) : unseenBeginning(draft);
   motion.began = true;
   draft.controller.warningDue = false;
   context.moveRetries = 0;
@@ -49,6 +49,35 @@ export function noteBegan(draft: Draft): void {
   if (step.row.kind === 'swing') context.swingStartUtcMs = stamp.utcMs;
   draft.saveRow(step.row);
   confirmResume(draft);
+}
+
+/**
+ * An edge of a motion that the controller never told of, nor keeps any more: it lies somewhere between two instants. The earlier one is taken, with an
+ * uncertainty that reaches the other (a rectangle about its end: width / √3), and the log says that it was not measured.
+ */
+export function untoldEdge(draft: Draft, edge: 'began' | 'ended', span: { fromUtcMs: number; toUtcMs: number }): Instant {
+  const { seq, path } = draft.step.row;
+  const spanS = Math.max(0, span.toUtcMs - span.fromUtcMs) / 1000;
+  draft.log('edge-not-told', { seq, path, edge, spanS });
+  return { utcMs: span.fromUtcMs, uS: Math.hypot(draft.context.uPlanS, spanS / Math.sqrt(3)) };
+}
+
+/** Not before its time, and not so late that the profile could not have passed. */
+function unseenBeginning(draft: Draft): Instant {
+  const { step, motion, stamp, event } = draft;
+  const fromUtcMs = motion.startUtcMs ?? step.row.startUtcMs;
+  const ended = event.type === 'link.motion-ended' && event.link.cause === 'done' && step.row.kind === 'swing';
+  const toUtcMs = ended ? stamp.utcMs - motion.durationMs : draft.nowUtcMs;
+  return untoldEdge(draft, 'began', { fromUtcMs, toUtcMs });
+}
+
+/** Whether the motion that has ended ever began: a waiting move that is cancelled ends where it stood. */
+function hasMoved(draft: Draft, angleDeg: number | null): boolean {
+  const { event, step, context } = draft;
+  if (event.type === 'link.homed') return true;
+  if (event.type === 'link.motion-ended' && event.link.cause === 'done') return true;
+  const fromDeg = step.row.angleStartDeg ?? context.moment.angleDeg;
+  return angleDeg !== null && Math.abs(angleDeg - fromDeg) > toleranceDeg(draft);
 }
 
 /** No timed motion begins before its time: a stamp that says so by no more than its own uncertainty means that time. */
@@ -91,6 +120,7 @@ export function noteEnded(draft: Draft): void {
   const { context, stamp, event, step, motion } = draft;
   const ending = event.type === 'link.homed' ? { angleDeg: event.link.angleDeg, cause: 'done' } : draft.told('link.motion-ended').link;
   const { angleDeg } = ending;
+  if (!motion.began && hasMoved(draft, angleDeg)) noteBegan(draft);
   context.uPlanS = stamp.uS;
   Object.assign(draft.controller, { moving: false, angleDeg, positionKnown: angleDeg !== null });
   motion.reached = ending.cause === 'done';

@@ -12,7 +12,8 @@ const MOST_MEAN_SPEED = 1.002;
 const MOST_ACCELERATION = 1.06;
 const LEAST_WINDOW = 8;
 const LEAST_PULSE_US = 2;
-const MOST_PULSE_US = 100;
+/** The step after it is planned while the line is heard, in the pulse; at 8000 steps/s, 125 µs, it must still end 5 µs before the next. */
+const MOST_PULSE_US = 120;
 const LEAST_SETUP_US = 5;
 const LEAST_END_INTERVAL = 0.95;
 

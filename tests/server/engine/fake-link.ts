@@ -34,6 +34,8 @@ export class FakeLink implements TurntableLink {
   supplyPresent = true;
   warningDue = false;
   refuseNext: { code: string; message: string } | null = null;
+  /** Events of these kinds are lost for good: they left the controller's ring before they could be read again. */
+  loses: LinkEvent['kind'][] = [];
   /** Swallow commands without a word. */
   deaf = false;
   mayRenew: () => boolean = () => false;
@@ -275,6 +277,7 @@ export class FakeLink implements TurntableLink {
   }
 
   private tell(event: LinkEvent): void {
+    if (this.loses.includes(event.kind)) return;
     for (const listener of [...this.listeners]) listener(event);
   }
 }
