@@ -4,9 +4,8 @@ import { rehearse } from '@/server/engine/rehearsal/rehearse';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import { verifyChain } from '@/shared/archive/chain';
 import type { SimulatedRun, StepRow } from '@/shared/archive/run-records';
-import { CODATA_2022_G } from '@/shared/physics/constants';
 import type { ProtocolDocument, Step } from '@/shared/protocol/document';
-import { demoRigWide } from '@/shared/rig/demo-rigs';
+import { soakStart } from './board/soak-start';
 import { WatchedBoard } from './board/watched-board';
 import { soak } from './report';
 
@@ -64,7 +63,7 @@ async function runNight(seed: number): Promise<NightFigures> {
   let board: WatchedBoard | null = null;
   const parts = rehearsalParts('board');
   const result = await rehearse(
-    { start: startOf(seed), startUtcMs: START_UTC_MS },
+    { start: soakStart(protocol, { seed, faults: faultsOf(seed) }), startUtcMs: START_UTC_MS },
     {
       ...parts,
       createLink,
@@ -115,15 +114,6 @@ function unmeasured(rows: readonly StepRow[], { motions }: WatchedBoard): string
         ...(Math.abs(ended) <= 3000 * (uEndS ?? 0) + STAMP_MS ? [] : [`row ${seq} ends ${ended} ms after the last step, u ${uEndS} s`]),
       ];
     });
-}
-
-function startOf(seed: number) {
-  return {
-    ...{ labId: 'soak', runId: '00000000-0000-8000-8000-000000000001', rigId: 'emulated', rigName: 'Emulated board', rigRevision: 1 },
-    ...{ protocolName: protocol.name, protocolRevision: 1, rig: demoRigWide, protocol, massSetLabel: 'lead', timeZone: 'UTC' },
-    ...{ operator: 'soak', notes: '', arm: null },
-    simulated: { trueG: CODATA_2022_G.value, seed, rateHz: 1, faults: faultsOf(seed) },
-  };
 }
 
 soak('night', async (args) => {

@@ -1,7 +1,7 @@
 import { demoIds, demoPassword } from '@/db/demo/seed';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import type { ProtocolDocument } from '@/shared/protocol/document';
-import { ControllerProcess } from '../contract/link/controller-process';
+import { ControllerProcess } from '@/scripts/soak/board/controller-process';
 import { sizes, type Size } from '../support/browser';
 import { Hand, until } from './support/hand';
 import { labOfThisFile } from './support/lab';

@@ -3,13 +3,14 @@ import type { StepRowView } from '@/shared/contracts/runs';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { benchRig } from '../contract/link/bench';
-import { ControllerProcess } from '../contract/link/controller-process';
+import { ControllerProcess } from '@/scripts/soak/board/controller-process';
 import { Hand, until } from './support/hand';
 import { RealServer } from './support/real-server';
 
 /**
- * In real time: a run that a browser starts drives a controller process through the real serial port class on a
- * pseudo-terminal. The line is cut in the middle of a dwell and comes back; the run goes on, and the log shows the gap.
+ * In real time: a run that a browser starts goes through the server's own engine, link and serial port class, and a pseudo-terminal, to the
+ * controller's firmware on the emulated board in a process of its own. The line is cut in the middle of a dwell and comes back; the run goes on,
+ * and the log shows the gap.
  */
 
 jest.setTimeout(120_000);
@@ -33,7 +34,7 @@ const document: ProtocolDocument = {
 };
 
 beforeAll(async () => {
-  controller = new ControllerProcess(['--homed', '--warned']);
+  controller = new ControllerProcess(['--board', '--homed'], { ...demoRigWide, stations: {}, motion: benchRig });
   await controller.start();
   server = await RealServer.start();
   hand = new Hand(await server.open('phone', 'keeper'));

@@ -6,7 +6,7 @@ import { degOfSteps } from '@/server/links/rig-units';
 import { serialFactory } from '@/server/links/serial-line';
 import { SimulatedLine } from '@/server/links/simulated-line';
 import { benchRig, type LinkBench } from './bench';
-import { sleep } from './controller-process';
+import { sleep } from '@/scripts/soak/board/controller-process';
 import { LinkWatch } from './link-watch';
 
 const BAUD_RATE = 115_200;

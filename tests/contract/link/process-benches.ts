@@ -1,7 +1,8 @@
 import { RealClock } from '@/server/boot/real-clock';
 import type { ByteLineFactory } from '@/server/interfaces/byte-line';
-import type { BenchMaker, LinkBench } from './bench';
-import { ControllerProcess, sleep } from './controller-process';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import { benchRig, type BenchMaker, type LinkBench } from './bench';
+import { ControllerProcess, sleep } from '@/scripts/soak/board/controller-process';
 
 /** Controllers as processes in real time, behind pseudo-terminals; `factoryOn` says over what the link reaches them. */
 export class ProcessBenches {
@@ -13,7 +14,7 @@ export class ProcessBenches {
   constructor(private readonly factoryOn: (process: ControllerProcess, clock: RealClock) => ByteLineFactory | Promise<ByteLineFactory>) {}
 
   async start(...options: string[]): Promise<ControllerProcess> {
-    const process = new ControllerProcess(options);
+    const process = new ControllerProcess(options, { ...demoRigWide, stations: {}, motion: benchRig });
     this.started.push(process);
     await process.start();
     return process;

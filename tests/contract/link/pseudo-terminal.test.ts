@@ -5,7 +5,7 @@ import { createLink } from '@/server/links/link-driver';
 import { serialFactory } from '@/server/links/serial-line';
 import { benchRig } from './bench';
 import { linkConformance } from './conformance';
-import { sleep } from './controller-process';
+import { sleep } from '@/scripts/soak/board/controller-process';
 import { ProcessBenches } from './process-benches';
 
 /** Real time: a controller process behind a pseudo-terminal, spoken to through the real serial port class. */

@@ -3,7 +3,7 @@ import { mkdtempSync, rmSync, writeFileSync } from 'node:fs';
 import { connect, createServer, type AddressInfo } from 'node:net';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import { sleep } from './controller-process';
+import { sleep } from '@/scripts/soak/board/controller-process';
 
 /** Debian's ser2net in front of a port: one TCP port that passes bytes as they are, one that speaks Telnet with RFC 2217. */
 export class SerialServer {

@@ -3,7 +3,7 @@ import { createLink } from '@/server/links/link-driver';
 import { tcpFactory } from '@/server/links/tcp-line';
 import { benchRig } from './bench';
 import { linkConformance } from './conformance';
-import { sleep, type ControllerProcess } from './controller-process';
+import { sleep, type ControllerProcess } from '@/scripts/soak/board/controller-process';
 import { ProcessBenches } from './process-benches';
 import { SerialServer } from './serial-server';
 

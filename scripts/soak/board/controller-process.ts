@@ -4,7 +4,7 @@ import { connect } from 'node:net';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
-import { benchRig } from './bench';
+import type { RigDocument } from '@/shared/rig/document';
 
 const root = join(__dirname, '..', '..', '..');
 const installHint =
@@ -19,10 +19,10 @@ export class ControllerProcess {
   private complaints = '';
   private talks = false;
 
-  constructor(options: readonly string[]) {
+  constructor(options: readonly string[], rig: RigDocument = demoRigWide) {
     this.path = join(this.folder, 'turntable');
     const rigFile = join(this.folder, 'rig.json');
-    writeFileSync(rigFile, JSON.stringify({ ...demoRigWide, stations: {}, motion: benchRig }));
+    writeFileSync(rigFile, JSON.stringify(rig));
     const args = ['--import', 'tsx', join(root, 'server/boot/controller.ts'), '--rig', rigFile, '--control', this.control, ...options];
     this.controller = spawn(process.execPath, args, { cwd: root, env: { ...process.env, TSX_TSCONFIG_PATH: join(root, 'tsconfig.json') } });
     this.controller.stderr?.on('data', (chunk: Buffer) => (this.complaints += chunk.toString()));
@@ -64,6 +64,15 @@ export class ControllerProcess {
     rmSync(this.path, { force: true });
   }
 
+  /** Everything stands still, the board's own time too; what it is told meanwhile waits. */
+  stall(): void {
+    this.controller.kill('SIGSTOP');
+  }
+
+  goOn(): void {
+    this.controller.kill('SIGCONT');
+  }
+
   /** One line to the control socket; its answer. */
   tell(words: string): Promise<string> {
     return new Promise((done, failed) => {
@@ -79,6 +88,7 @@ export class ControllerProcess {
 
   async dispose(): Promise<void> {
     await this.unplug();
+    this.goOn();
     this.controller.kill();
     await this.awaited('the end of the controller process', () => this.controller.exitCode !== null || this.controller.signalCode !== null);
     rmSync(this.folder, { recursive: true, force: true });
