@@ -4,7 +4,7 @@ import { BoardSession } from '../links/board/board-session';
 import { referenceFirmware } from '../links/board/firmware-file';
 import { stepsOfDeg } from '../links/rig-units';
 import type { BoardMemory } from './board-memory';
-import type { RealClock } from './real-clock';
+import type { Clock } from '../interfaces/clock';
 
 /** What an emulated board is made from. */
 export interface BoardSetting {
@@ -24,7 +24,7 @@ const LONGEST_AWAY_MS = 15 * 60_000;
  */
 export function newBoard(
   { rig, seed }: BoardSetting,
-  { clock, memory }: { clock: RealClock; memory: BoardMemory | null },
+  { clock, memory }: { clock: Clock; memory: BoardMemory | null },
 ): { session: BoardSession; presentMs: number } {
   const program = referenceFirmware();
   const nowMs = clock.monotonicMs();

@@ -8,6 +8,7 @@ import type { SimulatedController } from '../links/simulated-controller';
 import { ApparatusMemory } from './apparatus-memory';
 import type { BuildParts } from './build-parts';
 import { RealClock } from './real-clock';
+import { ScaledClock } from './scaled-clock';
 import { SimulatedApparatus } from './simulated-apparatus';
 import { createWorkerBoard } from './worker-board';
 
@@ -68,10 +69,10 @@ export class RigApparatus {
     return { apparatus, end: own?.end ?? nothingToEnd };
   }
 
-  /** In a thread of its own in real time; on another clock in this thread. */
+  /** In a thread of its own in real time, also where that is scaled; on a virtual clock in this thread. */
   private board(rigId: string, rig: RigMotion, seed: number): { controller: SimulatedController; end(): Promise<void> } {
     const { clock, config } = this.parts;
-    if (!(clock instanceof RealClock))
+    if (!(clock instanceof RealClock || clock instanceof ScaledClock))
       return { controller: createEmulatedController({ clock, rig, seed, homed: false }), end: nothingToEnd };
     const file = config.mode === 'test' ? null : join(config.stateDir, 'board', `${rigId.replaceAll(/[^\w-]/g, '')}.bin`);
     return createWorkerBoard({ rig, seed, file }, { clock, log: this.log });

@@ -8,32 +8,36 @@ import { StepTrack } from '../links/board/step-track';
 import { stepsOfDeg } from '../links/rig-units';
 import type { SimulatedController } from '../links/simulated-controller';
 import type { BoardSetting } from './board-setting';
-import { machineAheadMs, type FromBoard, type ToBoard } from './board-messages';
-import type { RealClock } from './real-clock';
+import type { FromBoard, ToBoard } from './board-messages';
+import { factorOf, machineTimeOf, type MachineTime, type ThreadClock } from './machine-time';
 import { threadOf } from './worker-tasks';
 
 /** The emulated board in a worker thread, as the main thread holds it: what it does and what it says go through as messages. */
 class WorkerBoardHost implements BoardHost {
   onLine: (line: BoardLine) => void = () => undefined;
   private readonly worker: Worker;
-  private readonly aheadMs: number;
+  private readonly time: MachineTime;
   private readonly track: StepTrack;
 
   constructor(
-    private readonly clock: RealClock,
+    private readonly clock: ThreadClock,
     setting: BoardSetting,
     onBroken: (error: Error) => void,
   ) {
-    this.aheadMs = machineAheadMs(clock);
+    this.time = machineTimeOf(clock);
     this.track = new StepTrack(stepsOfDeg(setting.rig, setting.rig.homeDeg));
-    this.worker = new Worker(threadOf('board-thread.ts'), { eval: true, execArgv: [], workerData: setting });
+    this.worker = new Worker(threadOf('board-thread.ts'), {
+      eval: true,
+      execArgv: [],
+      workerData: { ...setting, factor: factorOf(clock) },
+    });
     this.worker.unref();
     this.worker.on('message', (message: FromBoard) => this.heard(message));
     this.worker.on('error', onBroken);
   }
 
   write(bytes: string): void {
-    this.send({ kind: 'write', bytes, atMs: this.clock.monotonicMs() + this.aheadMs });
+    this.send({ kind: 'write', bytes, atMs: this.time.toMachineMs(this.clock.monotonicMs()) });
   }
 
   do(deed: BoardDeed): void {
@@ -53,15 +57,15 @@ class WorkerBoardHost implements BoardHost {
   }
 
   private heard(message: FromBoard): void {
-    if (message.kind === 'lines') for (const { text, atMs } of message.lines) this.onLine({ text, atMs: atMs - this.aheadMs });
-    else for (const { time, place } of message.steps) this.track.add(time - this.aheadMs, place);
+    if (message.kind === 'lines') for (const { text, atMs } of message.lines) this.onLine({ text, atMs: this.time.fromMachineMs(atMs) });
+    else for (const { time, place } of message.steps) this.track.add(this.time.fromMachineMs(time), place);
   }
 }
 
 /** The demo's turntable: the reference firmware on the emulated board, in a thread of its own. `end` takes the thread down. */
 export function createWorkerBoard(
   setting: BoardSetting & { rig: RigMotion },
-  { clock, log }: { clock: RealClock; log: Logger },
+  { clock, log }: { clock: ThreadClock; log: Pick<Logger, 'error'> },
 ): { controller: SimulatedController; end(): Promise<void> } {
   const host = new WorkerBoardHost(clock, setting, (error) => log.error({ err: error }, 'the emulated board failed'));
   const { rig, seed } = setting;
