@@ -16,6 +16,7 @@ import type { Role } from '@/shared/contracts/roles';
 import type { RunState, RunView } from '@/shared/contracts/runs';
 import { roles } from '@/shared/contracts/roles';
 import type { ProtocolDocument } from '@/shared/protocol/document';
+import { cautionsVersion } from '@/shared/rig/cautions';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import type { TestDatabase } from './database';
 
@@ -39,6 +40,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
   publicUrl: null,
   trustedProxies: 0,
   demo: true,
+  virtualExitDelayS: 120,
   stateDir: tmpdir(),
   webDir: null,
   smtpUrl: null,
@@ -232,12 +234,37 @@ export class LabServer {
     return this.as(who, 'POST', `/labs/${demoIds.lab}/runs/${runId}/${what}`).send(body);
   }
 
-  /** Arms the demo rig until `hours` from now. */
-  async arm(hours = 16, rigId: string = demoIds.rig): Promise<void> {
+  /** Signs the cautions of a rig as everybody who may set it in motion. */
+  async sign(rigId: string = demoIds.rig): Promise<void> {
+    for (const who of ['owner', 'keeper', 'operator'] as const)
+      await this.as(who, 'POST', `/labs/${demoIds.lab}/rigs/${rigId}/cautions`).send({ version: cautionsVersion }).expect(201);
+  }
+
+  /** Asks as the operator to arm the demo rig until `hours` from now; the key is not turned yet. */
+  askArm(hours = 16, rigId: string = demoIds.rig): request.Test {
     const until = new Date(this.clock.utcMs() + hours * 3_600_000).toISOString();
-    await this.as('operator', 'POST', `/labs/${demoIds.lab}/rigs/${rigId}/arm`)
-      .send({ name: 'Ilse Marrowby', until, cautionsRead: true })
-      .expect(201);
+    return this.as('operator', 'POST', `/labs/${demoIds.lab}/rigs/${rigId}/arm`).send({ name: 'Ilse Marrowby', until });
+  }
+
+  /** Turns the arm key off and on, as somebody at the rig does. */
+  async turnKey(rigId: string = demoIds.rig): Promise<void> {
+    for (const on of [false, true]) {
+      this.world.controller(rigId).turnArmKey(on);
+      await this.advance(200);
+    }
+  }
+
+  /** Arms the demo rig until `hours` from now: cautions, key, exit delay, closed door. */
+  async arm(hours = 16, rigId: string = demoIds.rig): Promise<void> {
+    await this.sign(rigId);
+    await this.askArm(hours, rigId).expect(202);
+    await this.turnKey(rigId);
+    const { arms } = this.services;
+    await this.advance(121_000, () => arms.armOf(rigId) !== null);
+    for (let turns = 0; turns < 20 && arms.armOf(rigId) === null; turns += 1) await this.advance(10);
+    // On a whole second: what a test writes in whole milliseconds is then exactly at the start of its run.
+    await this.advance(1000 - (this.clock.utcMs() % 1000));
+    if (arms.armOf(rigId) === null) throw new Error(`the rig is not armed: ${arms.endedOf(rigId)?.why ?? 'it says nothing'}`);
   }
 }
 

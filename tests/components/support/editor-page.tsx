@@ -43,9 +43,13 @@ const live = {
   moving: false,
   interlockClosed: true,
   supplyPresent: true,
+  armKey: true,
   driversOn: true,
 };
-const rig = { id: 'rig-1', name: 'North bench', revision: 1, link: { kind: 'simulated' }, live, arm: null, activeRun: null };
+const rig = {
+  ...{ id: 'rig-1', name: 'North bench', revision: 1, link: { kind: 'simulated' }, live },
+  ...{ arm: null, arming: null, disarmed: null, locks: [], activeRun: null },
+};
 
 export interface EditorPage {
   lab: FakeLab;
