@@ -33,9 +33,9 @@ export function conditionsOf(line: LineMessage | null): Condition[] {
 export function BeforePanel({ rig, line, guided }: { rig: RigView; line: LineMessage | null; guided: GuidedMove }) {
   const [read, setRead] = useState(false);
   const mayMove = useMay('run.start').ok;
-  const conditions = conditionsOf(line);
   const signed = useOwnSignature(rig) !== null;
-  const ready = signed && conditions.every(({ met }) => met);
+  const conditions = [{ words: 'You have signed the cautions for this rig', met: signed }, ...conditionsOf(line)];
+  const ready = conditions.every(({ met }) => met);
   return (
     <>
       <Section title="Before anything moves">

@@ -1,7 +1,8 @@
 import { useState } from 'react';
 import { fieldErrors, serverNowMs, useLab, useLabMutation, useSession, wordsOf } from '@/components/api';
 import { Body, Button, Check, Field, Label, ProblemNotice, Select, Sheet } from '@/components/ui';
-import { arm, type RigView } from '@/shared/contracts/rigs';
+import { type RigView } from '@/shared/contracts/rigs';
+import { arm } from '@/shared/contracts/standing';
 import { formatClockWithZone } from '@/shared/lib/format-time';
 import { CautionsPanel, useOwnSignature } from './cautions-panel';
 import { useRefreshRigs } from './use-rig';

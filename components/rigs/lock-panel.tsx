@@ -3,7 +3,8 @@ import { View } from 'react-native';
 import { useLab, useLabMutation, useMay, useSession, wordsOf } from '@/components/api';
 import { MayNote } from '@/components/people/may-note';
 import { Body, Button, Check, Field, Icon, Label, Panel, ProblemNotice, Section, Sheet } from '@/components/ui';
-import { liftLock, overrideLock, setLock, type LockView, type RigView } from '@/shared/contracts/rigs';
+import { type RigView } from '@/shared/contracts/rigs';
+import { liftLock, overrideLock, setLock, type LockView } from '@/shared/contracts/standing';
 import { formatDayAndClock } from '@/shared/lib/format-time';
 import { useRefreshRigs } from './use-rig';
 

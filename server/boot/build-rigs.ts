@@ -57,7 +57,7 @@ export function buildRigSide(
     paceMs: overrides.paceMs ?? 0,
     epochOf: (rig) => leases.epochOf(rig),
     apparatusOf: (rig) => apparatus.of(rig),
-    onLinkEvent: heedLink,
+    onLinkEvent: (station, event) => heed(station, event),
   });
   const supervisor: RigSupervisor = new RigSupervisor({
     store: createRunStore(database.db),
@@ -83,6 +83,8 @@ export function buildRigSide(
     endArm: (rig, why, by) => arms.end(rig, why, by),
     onChange: onLine,
   });
+  const heed = heedLinks({ arms, arming, guided, log });
+
   /** Two drivers on one rig would be worse than none. */
   function letGo(): void {
     log.fatal('another server has taken a rig over; this one lets go of all of them');
@@ -91,10 +93,13 @@ export function buildRigSide(
     background.add(stations.close(), 'closing the lines');
   }
 
-  const known = new Map<string, boolean>();
+  return { arms, arming, locks, leases, stations, supervisor, guided, apparatus };
+}
 
-  /** Whatever lets people or surprises into the room, or loses the position, ends the arm, run or no run. */
-  function heedLink(station: RigStation, event: LinkEvent): void {
+/** What each line tells: whatever lets people or surprises into the room, or loses the position, ends the arm, run or no run. */
+function heedLinks({ arms, arming, guided, log }: Pick<RigSide, 'arms' | 'arming' | 'guided'> & { log: Logger }) {
+  const known = new Map<string, boolean>();
+  return (station: RigStation, event: LinkEvent): void => {
     const wasKnown = known.get(station.rigId) ?? false;
     const why = endOfArm(event, { wasKnown, armedBootId: arms.armOf(station.rigId)?.bootId ?? null });
     known.set(station.rigId, knownAfter(event, wasKnown));
@@ -102,7 +107,5 @@ export function buildRigSide(
     if (event.kind === 'clock-stepped') log.warn({ rigId: station.rigId, clock: event.clock, byMs: event.byMs }, 'a clock stepped');
     arming.heard(station.rigId, event);
     guided.heard(station.rigId, event);
-  }
-
-  return { arms, arming, locks, leases, stations, supervisor, guided, apparatus };
+  };
 }

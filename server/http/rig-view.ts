@@ -1,4 +1,5 @@
-import type { ArmingView, ArmView, LockView, RigLive, RigSummary, RigView, SignatureView } from '@/shared/contracts/rigs';
+import type { RigLive, RigSummary, RigView } from '@/shared/contracts/rigs';
+import type { ArmingView, ArmView, LockView, SignatureView } from '@/shared/contracts/standing';
 import type { ArmingNow } from '../engine/arming';
 import type { StandingArm } from '../interfaces/arm-keeper';
 import type { PersonalLock } from '../interfaces/lock-keeper';

@@ -1,7 +1,8 @@
 import * as z from 'zod';
 import { idSchema, instantSchema } from './common';
 import { defineRoute } from './route';
-import { armingViewSchema, armViewSchema, disarmedViewSchema, linkSettingsSchema, lockViewSchema, usbIdentitySchema } from './rigs';
+import { linkSettingsSchema, usbIdentitySchema } from './rigs';
+import { armingViewSchema, armViewSchema, disarmedViewSchema, lockViewSchema } from './standing';
 
 /** The line of a rig as it is now, and the small moves of a person who stands at the rig. */
 

@@ -151,6 +151,9 @@ tell('from a desk an operator sees the line, and what must hold before a first m
   await hand.taps('first-move');
   await hand.at('first-move-screen').waitFor();
   await hand.taps('first-move-read');
+  // Each signs for himself.
+  expect(await hand.isEnabled('begin-guided')).toBe(false);
+  await hand.taps('sign-cautions');
   await until(() => hand.isEnabled('begin-guided'), 'the first move to be allowed');
   await hand.taps('begin-guided');
   await until(() => hand.isEnabled('nudge-ccw'), 'the nudge to be allowed');

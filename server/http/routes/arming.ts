@@ -1,4 +1,4 @@
-import * as contracts from '@/shared/contracts/rigs';
+import * as contracts from '@/shared/contracts/standing';
 import { cautionsText, cautionsVersion } from '@/shared/rig/cautions';
 import type { ArmRequest } from '@/server/engine/arming';
 import { longestArmMs } from '@/server/store/arms';

@@ -1,7 +1,7 @@
 import { act, fireEvent, screen } from '@testing-library/react';
 import { useSession } from '@/components/api';
 import { StartScreen } from '@/components/rigs/start-screen';
-import type { LockView } from '@/shared/contracts/rigs';
+import type { LockView } from '@/shared/contracts/standing';
 import { cautionsVersion } from '@/shared/rig/cautions';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { params, went } from '../support/fake-router';

@@ -76,7 +76,10 @@ export async function openEditor(role: Role = 'operator', document: ProtocolDocu
     revisions: [],
   });
   lab.on('GET /labs/lab-1/rigs', () => ({ body: { items: [rig] } }));
-  lab.on('GET /labs/lab-1/rigs/rig-1', () => ({ body: { ...rig, document: demoRigWide, massSets: [], position: null }, etag: '"r1"' }));
+  lab.on('GET /labs/lab-1/rigs/rig-1', () => ({
+    body: { ...rig, document: demoRigWide, massSets: [], signatures: [], position: null },
+    etag: '"r1"',
+  }));
   lab.on(`GET ${protocolPath}`, () => ({ body: view(), etag: `"${version}"` }));
   lab.on(`PUT ${protocolPath}`, ({ body, headers }) => {
     if (headers.get('if-match') !== `"${version}"`)

@@ -142,8 +142,9 @@ export class Hand {
   async asksToArm(opener: 'arm' | 'arm-here' = 'arm'): Promise<void> {
     await this.taps(opener);
     await this.at('arm-sheet').waitFor();
-    if ((await this.page.getByTestId('sign-cautions').count()) > 0) await this.taps('sign-cautions');
-    await this.at('cautions-signed').waitFor();
+    const sheet = this.page.getByTestId('arm-sheet');
+    if ((await sheet.getByTestId('sign-cautions').count()) > 0) await this.taps(sheet.getByTestId('sign-cautions'));
+    await sheet.getByTestId('cautions-signed').waitFor();
     await this.taps('arm-on-site');
     await this.taps('arm-confirm');
     await this.at('arming').waitFor();
