@@ -3,7 +3,7 @@ import { View } from 'react-native';
 import { MayNote } from '@/components/people/may-note';
 import { useMay } from '@/components/api';
 import { ArmPanel } from '@/components/rigs/arm-panel';
-import { cautions } from '@/components/rigs/cautions';
+import { CautionsPanel, useOwnSignature } from '@/components/rigs/cautions-panel';
 import { Body, Button, Check, Icon, Panel, ProblemNotice, Section } from '@/components/ui';
 import type { LineMessage } from '@/shared/contracts/link';
 import type { RigView } from '@/shared/contracts/rigs';
@@ -20,6 +20,7 @@ export function conditionsOf(line: LineMessage | null): Condition[] {
   return [
     { words: 'The controller answers', met: line?.health.condition === 'ready' && controller !== null },
     { words: 'No run has the rig', met: line !== null && line.takenBy === null },
+    { words: 'Nobody else’s hands are in the rig', met: line !== null && line.locks.length === 0 },
     { words: 'A named person at the rig has armed it', met: line !== null && line.arm !== null },
     { words: 'The arm key on the controller is on', met: controller?.armKey === true },
     { words: 'The interlock is closed', met: controller?.interlockClosed === true },
@@ -32,21 +33,13 @@ export function conditionsOf(line: LineMessage | null): Condition[] {
 export function BeforePanel({ rig, line, guided }: { rig: RigView; line: LineMessage | null; guided: GuidedMove }) {
   const [read, setRead] = useState(false);
   const mayMove = useMay('run.start').ok;
-  const conditions = conditionsOf(line);
+  const signed = useOwnSignature(rig) !== null;
+  const conditions = [{ words: 'You have signed the cautions for this rig', met: signed }, ...conditionsOf(line)];
   const ready = conditions.every(({ met }) => met);
   return (
     <>
       <Section title="Before anything moves">
-        <Panel className="gap-2.5" edge="lamp">
-          {cautions.map((caution) => (
-            <View key={caution.title}>
-              <Body strong>{caution.title}</Body>
-              <Body size={13} tone="dim">
-                {caution.words}
-              </Body>
-            </View>
-          ))}
-        </Panel>
+        <CautionsPanel rig={rig} />
       </Section>
       <ArmPanel rig={rig} />
       <Section title="What must hold">
@@ -65,7 +58,7 @@ export function BeforePanel({ rig, line, guided }: { rig: RigView; line: LineMes
         {mayMove ? (
           <>
             <Check
-              label="I stand at the rig and see the table. The hard-wired stop is within reach. I have read the cautions."
+              label="I stand at the rig and see the table. The hard-wired stop is within reach."
               value={read}
               onChange={setRead}
               testID="first-move-read"

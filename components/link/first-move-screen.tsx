@@ -3,6 +3,7 @@ import { View } from 'react-native';
 import { wordsOf } from '@/components/api';
 import { PlanView } from '@/components/charts/plan-view';
 import { ArmPanel } from '@/components/rigs/arm-panel';
+import { LockedNotice, lockWords } from '@/components/rigs/lock-panel';
 import { useRig } from '@/components/rigs/use-rig';
 import { Body, Button, Chip, Empty, Loading, Panel, ProblemNotice, Screen, Tabs, useWide } from '@/components/ui';
 import type { RigView } from '@/shared/contracts/rigs';
@@ -75,6 +76,7 @@ function FirstMove({ rig, motion, etag }: Pick<StepProps, 'rig' | 'motion' | 'et
         </>
       }
     >
+      <LockedNotice words={lockWords(line?.locks ?? [])} />
       {on ? <Steps {...{ rig, motion, etag, line, guided, move }} /> : <BeforePanel rig={rig} line={line} guided={guided} />}
     </Screen>
   );

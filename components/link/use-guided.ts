@@ -95,7 +95,7 @@ export function useGuided(rigId: string, { line, broken }: LiveLine): GuidedMove
     problem: failure === null ? null : wordsOf(failure),
     begin: () => {
       forget();
-      beginning.mutate({ params, body: { cautionsRead: true } });
+      beginning.mutate({ params, body: { atTheRig: true } });
     },
     end: () => {
       if (guidedId === null) return;

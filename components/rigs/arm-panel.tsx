@@ -3,9 +3,11 @@ import { View } from 'react-native';
 import { useLab, useLabMutation, useMay, wordsOf } from '@/components/api';
 import { MayNote } from '@/components/people/may-note';
 import { Body, Button, Icon, Label, Panel, ProblemNotice, Section } from '@/components/ui';
-import { disarm, type RigView } from '@/shared/contracts/rigs';
+import { type RigView } from '@/shared/contracts/rigs';
+import { disarm } from '@/shared/contracts/standing';
 import { formatClockWithZone } from '@/shared/lib/format-time';
 import { ArmSheet } from './arm-sheet';
+import { ArmingProgress, VirtualInputsPanel, WhyDisarmed } from './arming-progress';
 import { useRefreshRigs } from './use-rig';
 
 /** Who answers for the rig on site, until when; the way to arm and to end it. */
@@ -14,23 +16,30 @@ export function ArmPanel({ rig }: { rig: RigView }) {
   const mayArm = useMay('rig.arm').ok;
   return (
     <Section title="Arm">
-      <Panel className="gap-3" edge={rig.arm === null ? undefined : 'lamp'}>
-        {rig.arm === null ? (
-          <Body tone="dim">
-            Not armed. A run starts only on a rig that a named person has armed on site, until after the finish. Hold and stop never need
-            it.
-          </Body>
-        ) : (
-          <Armed arm={rig.arm} />
-        )}
+      <Panel className="gap-3" edge={rig.arm === null && rig.arming === null ? undefined : 'lamp'}>
+        <ArmState rig={rig} />
         <MayNote act="rig.arm" />
-        {mayArm && rig.arm === null ? (
+        {mayArm && rig.arm === null && rig.arming === null ? (
           <Button icon="key" label="Arm the rig" className="self-start" onPress={() => setArming(true)} testID="arm" />
         ) : null}
         {mayArm && rig.arm !== null ? <Disarm rig={rig} /> : null}
       </Panel>
+      <VirtualInputsPanel rig={rig} />
       {arming ? <ArmSheet rig={rig} onClose={() => setArming(false)} /> : null}
     </Section>
+  );
+}
+
+function ArmState({ rig }: { rig: RigView }) {
+  if (rig.arm !== null) return <Armed arm={rig.arm} />;
+  if (rig.arming !== null) return <ArmingProgress rig={rig} arming={rig.arming} />;
+  return (
+    <View className="gap-2">
+      <Body tone="dim">
+        Not armed. A run starts only on a rig that a named person has armed on site, until after the finish. Hold and stop never need it.
+      </Body>
+      <WhyDisarmed disarmed={rig.disarmed} />
+    </View>
   );
 }
 
@@ -63,9 +72,7 @@ function Disarm({ rig }: { rig: RigView }) {
         onPress={() => end.mutate({ params: { rigId: rig.id } })}
         testID="disarm"
       />
-      {rig.activeRun === null ? null : (
-        <Label>The running run goes on; it cannot be resumed after a hold until the rig is armed again.</Label>
-      )}
+      {rig.activeRun === null ? null : <Label>A run that goes on is held at once, until the rig is armed again.</Label>}
     </View>
   );
 }

@@ -1,16 +1,19 @@
 import { useState } from 'react';
-import { View } from 'react-native';
 import { fieldErrors, serverNowMs, useLab, useLabMutation, useSession, wordsOf } from '@/components/api';
 import { Body, Button, Check, Field, Label, ProblemNotice, Select, Sheet } from '@/components/ui';
-import { arm, type RigView } from '@/shared/contracts/rigs';
+import { type RigView } from '@/shared/contracts/rigs';
+import { arm } from '@/shared/contracts/standing';
 import { formatClockWithZone } from '@/shared/lib/format-time';
-import { cautions } from './cautions';
+import { CautionsPanel, useOwnSignature } from './cautions-panel';
 import { useRefreshRigs } from './use-rig';
 
 const hours = ['1', '4', '8', '12', '16', '24', '48', '72'] as const;
 type Hours = (typeof hours)[number];
 
-/** A named person at the rig signs the cautions and answers for it until a time, 16 h ahead unless said otherwise, 72 h at most. */
+/**
+ * A named person at the rig signs the cautions and answers for it until a time, 16 h ahead unless said otherwise, 72 h at most. What follows happens
+ * at the rig: the key, the exit delay, the closed door.
+ */
 export function ArmSheet({ rig, onClose }: { rig: RigView; onClose: () => void }) {
   const { timeZone } = useLab();
   const { state } = useSession();
@@ -19,18 +22,18 @@ export function ArmSheet({ rig, onClose }: { rig: RigView; onClose: () => void }
   const [forHours, setForHours] = useState<Hours>('16');
   const [note, setNote] = useState('');
   const [onSite, setOnSite] = useState(false);
-  const [read, setRead] = useState(false);
+  const signed = useOwnSignature(rig) !== null;
   const send = useLabMutation(arm, () => {
     refresh();
     onClose();
   });
   const untilMs = serverNowMs() + Number(forHours) * 3_600_000;
-  const complete = name.trim() !== '' && onSite && read;
+  const complete = name.trim() !== '' && onSite && signed;
   const errors = fieldErrors(send.error);
   const submit = () =>
     send.mutate({
       params: { rigId: rig.id },
-      body: { name: name.trim(), until: new Date(untilMs).toISOString(), note: note.trim(), cautionsRead: true },
+      body: { name: name.trim(), until: new Date(untilMs).toISOString(), note: note.trim() },
     });
   return (
     <Sheet
@@ -40,12 +43,12 @@ export function ArmSheet({ rig, onClose }: { rig: RigView; onClose: () => void }
       testID="arm-sheet"
       footer={
         <>
-          {complete ? null : <Label>Name, place and cautions must be given first.</Label>}
+          {complete ? null : <Label>Name, place and your signature under the cautions must be given first.</Label>}
           <Button
             kind="primary"
             size="action"
             icon="key"
-            label="Arm"
+            label="Arm: to the key"
             disabled={!complete}
             busy={send.isPending}
             onPress={submit}
@@ -64,31 +67,18 @@ export function ArmSheet({ rig, onClose }: { rig: RigView; onClose: () => void }
         error={errors['until']}
       />
       <Field label="Note for whoever starts a run" value={note} onChange={setNote} placeholder="camera glued, do not level" />
-      <Cautions />
+      <CautionsPanel rig={rig} />
       <Check
         label="I am at the rig, I have looked, and nobody will be in the swept circle."
         value={onSite}
         onChange={setOnSite}
         testID="arm-on-site"
       />
-      <Check label="I have read these cautions and seen to them." value={read} onChange={setRead} testID="arm-cautions" />
+      <Body size={13} tone="dim">
+        Then turn the arm key on at the controller, leave within the exit delay and close the door. The rig is armed when the delay is over
+        with the door closed.
+      </Body>
       {send.isError ? <ProblemNotice title="The rig was not armed" {...wordsOf(send.error)} /> : null}
     </Sheet>
-  );
-}
-
-/** The cautions, one line each. */
-function Cautions() {
-  return (
-    <View className="gap-2.5 rounded-panel border border-line p-4">
-      {cautions.map((caution) => (
-        <View key={caution.title}>
-          <Body strong>{caution.title}</Body>
-          <Body size={13} tone="dim">
-            {caution.words}
-          </Body>
-        </View>
-      ))}
-    </View>
   );
 }

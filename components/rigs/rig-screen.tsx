@@ -9,6 +9,7 @@ import { ArmPanel } from './arm-panel';
 import { linkState } from './link-words';
 import { LinkPanel } from './link-panel';
 import { LiveFacts } from './live-facts';
+import { LockPanel } from './lock-panel';
 import { MassSets } from './mass-sets';
 import { PositionFacts } from './position-facts';
 import { RigDocumentSection } from './rig-document-section';
@@ -59,6 +60,7 @@ export function RigScreen() {
       <LivePanel rig={rig} />
       <PositionPanel rig={rig} />
       <ArmPanel rig={rig} />
+      <LockPanel rig={rig} />
       <LinkPanel rig={rig} />
     </Screen>
   );

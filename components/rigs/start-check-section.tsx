@@ -1,8 +1,10 @@
 import { useState } from 'react';
 import { useLabQuery, wordsOf } from '@/components/api';
-import { Button, Loading, ProblemNotice, Section } from '@/components/ui';
+import { Button, Loading, Panel, ProblemNotice, Section } from '@/components/ui';
 import { startChecks, type RigView } from '@/shared/contracts/rigs';
 import { ArmSheet } from './arm-sheet';
+import { ArmingProgress, VirtualInputsPanel } from './arming-progress';
+import { CautionsPanel, useOwnSignature } from './cautions-panel';
 import { CheckList } from './check-list';
 import type { StartChoice } from './start-review';
 
@@ -14,6 +16,7 @@ export const useStartChecks = (rig: RigView, { protocolId, revision }: StartChoi
 export function StartCheckSection({ rig, choice }: { rig: RigView; choice: StartChoice }) {
   const checks = useStartChecks(rig, choice);
   const [arming, setArming] = useState(false);
+  const signed = useOwnSignature(rig) !== null;
   const data = checks.data?.data;
   const close = () => {
     setArming(false);
@@ -32,7 +35,16 @@ export function StartCheckSection({ rig, choice }: { rig: RigView; choice: Start
       ) : (
         <Loading label="Making the start checks" />
       )}
-      {rig.arm === null ? (
+      {rig.arming === null ? null : (
+        <>
+          <Panel edge="lamp">
+            <ArmingProgress rig={rig} arming={rig.arming} />
+          </Panel>
+          <VirtualInputsPanel rig={rig} />
+        </>
+      )}
+      {signed || arming ? null : <CautionsPanel rig={rig} />}
+      {rig.arm === null && rig.arming === null ? (
         <Button icon="key" label="Arm the rig" className="self-start" onPress={() => setArming(true)} testID="arm-here" />
       ) : null}
       {arming ? <ArmSheet rig={rig} onClose={close} /> : null}

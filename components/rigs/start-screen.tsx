@@ -5,6 +5,7 @@ import { useLabQuery, useMay, wordsOf } from '@/components/api';
 import { Body, Empty, Field, Loading, Panel, ProblemNotice, Screen, Section, Select } from '@/components/ui';
 import { getProtocol, listProtocols, type ProtocolSummary } from '@/shared/contracts/protocols';
 import type { RigView } from '@/shared/contracts/rigs';
+import { LockedNotice, lockWords } from './lock-panel';
 import { StartCheckSection } from './start-check-section';
 import { StartReview } from './start-review';
 import { useRig } from './use-rig';
@@ -74,6 +75,7 @@ function StartForm({ rig, issued, title, back }: StartFormProps) {
   };
   return (
     <Screen title={title} back={back} testID="start-screen" aside={<StartReview rig={rig} choice={choice} />}>
+      <LockedNotice words={lockWords(rig.locks)} />
       <Section title="What to run">
         <Panel className="gap-4">
           <View className="gap-4 wide:flex-row wide:*:flex-1">

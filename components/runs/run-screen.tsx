@@ -4,6 +4,7 @@ import { useLab, wordsOf } from '@/components/api';
 import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, useWide } from '@/components/ui';
 import type { RunView } from '@/shared/contracts/runs';
 import { PositionFacts } from '@/components/rigs/position-facts';
+import { LockedNotice } from '@/components/rigs/lock-panel';
 import { ControlBar } from './control-bar';
 import { HeldNotice } from './held-notice';
 import { linkAge } from './link-age';
@@ -76,6 +77,7 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
       testID="run-screen"
     >
       <RunHead view={view} timeZone={timeZone} serverNowMs={serverNowMs} lost={lost} />
+      <LockedNotice words={state.beat?.lockedBy ?? null} />
       <LostNotice age={age} />
       <SlipNotice view={view} timeZone={timeZone} />
       <HeldNotice view={view} timeZone={timeZone} serverNowMs={serverNowMs} />

@@ -109,6 +109,56 @@ export const arms = pgTable(
   ],
 );
 
+/** "My hands are in the rig": nothing moves on the rig until every lock is lifted, each by the one who set it or by an owner with a reason. */
+export const personalLocks = pgTable(
+  'personal_locks',
+  {
+    labId: key('lab_id').notNull(),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
+    rigId: key('rig_id').notNull(),
+    userId: key('user_id')
+      .notNull()
+      .references(() => users.id),
+    name: text('name').notNull(),
+    note: text('note').notNull().default(''),
+    setAt: instant('set_at').notNull(),
+    liftedAt: instant('lifted_at'),
+    liftedBy: text('lifted_by'),
+    /** Why somebody else lifted it; null where it was lifted by the one who set it. */
+    liftedWhy: text('lifted_why'),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.id] }),
+    foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
+    uniqueIndex('personal_locks_one_each')
+      .on(table.labId, table.rigId, table.userId)
+      .where(sql`${table.liftedAt} is null`),
+  ],
+);
+
+/** Who has signed the cautions for a rig, in which version of their words and when. */
+export const cautionSignatures = pgTable(
+  'caution_signatures',
+  {
+    labId: key('lab_id').notNull(),
+    rigId: key('rig_id').notNull(),
+    userId: key('user_id')
+      .notNull()
+      .references(() => users.id),
+    version: integer('version').notNull(),
+    name: text('name').notNull(),
+    /** SHA-256 of the words that were signed. */
+    textHash: text('text_hash').notNull(),
+    signedAt: instant('signed_at').notNull(),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.rigId, table.userId, table.version] }),
+    foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
+  ],
+);
+
 export const massSets = pgTable(
   'mass_sets',
   {

@@ -25,6 +25,8 @@ export interface BuildOverrides {
   controllerOf?: (rig: StationRig) => SimulatedController;
   /** How often jobs are looked for and samples are stored, ms; default once a second. Tests on a clock of their own save the database work. */
   paceMs?: number;
+  /** Exit delay of a rig with a real line, ms; for tests in real time. */
+  exitDelayMs?: number;
   /** Whether chores run at their UTC times; they follow the machine's clock, whatever `clock` is. */
   ticks?: boolean;
 }

@@ -1,5 +1,6 @@
 import { randomUUID } from 'node:crypto';
 import type { Logger } from 'pino';
+import type { Arming } from '../engine/arming';
 import { endOfArm, knownAfter } from '../engine/end-of-arm';
 import { GuidedMoves } from '../engine/guided-moves';
 import { RigSupervisor } from '../engine/rig-supervisor';
@@ -8,18 +9,21 @@ import type { RigStation } from '../interfaces/rig-stations';
 import type { SampleStore } from '../interfaces/sample-store';
 import type { LinkEvent } from '../interfaces/turntable-link';
 import { createRunStore } from '../store/run-store';
-import { MemoryArmKeeper } from './arm-keeper';
+import type { MemoryArmKeeper } from './arm-keeper';
 import type { Background } from './background';
 import type { BuildParts } from './build-parts';
+import { buildStanding, engineItself } from './build-standing';
 import { LeaseKeeper } from './lease-keeper';
+import type { MemoryLockKeeper } from './lock-keeper';
 import { RigApparatus } from './rig-apparatus';
 import { ServerRigStations } from './rig-stations';
 
-const engineItself = { id: null, name: 'the run engine' };
 const shortestLeaseMs = 3_000;
 
 export interface RigSide {
   arms: MemoryArmKeeper;
+  arming: Arming;
+  locks: MemoryLockKeeper;
   leases: LeaseKeeper;
   stations: ServerRigStations;
   supervisor: RigSupervisor;
@@ -33,7 +37,12 @@ export function buildRigSide(
   { log, background, samples, onLine }: { log: Logger; background: Background; samples: SampleStore; onLine(rigId: string): void },
 ): RigSide {
   const { engineDatabase: database = parts.database, clock, overrides = {} } = parts;
-  const arms = new MemoryArmKeeper({ database, clock, log, sha256: sha256Hex, background: (work, what) => background.add(work, what) });
+  const { arms, arming, locks } = buildStanding(parts, {
+    ...{ log, background, onLine },
+    stationOf: (rigId) => stations.get(rigId),
+    supervisor: () => supervisor,
+    guided: () => guided,
+  });
   const leases = new LeaseKeeper({
     database,
     clock,
@@ -48,7 +57,7 @@ export function buildRigSide(
     paceMs: overrides.paceMs ?? 0,
     epochOf: (rig) => leases.epochOf(rig),
     apparatusOf: (rig) => apparatus.of(rig),
-    onLinkEvent: heedLink,
+    onLinkEvent: (station, event) => heed(station, event),
   });
   const supervisor: RigSupervisor = new RigSupervisor({
     store: createRunStore(database.db),
@@ -56,6 +65,8 @@ export function buildRigSide(
     sha256: sha256Hex,
     linkOf: (rigId) => stations.get(rigId)?.link ?? null,
     armOf: (rigId) => arms.armOf(rigId),
+    whyDisarmed: (rigId) => arms.endedOf(rigId)?.why ?? '',
+    lockedBy: (rigId) => locks.lockedBy(rigId),
     guidedBy: (rigId) => guided.takenBy(rigId),
     perform: (effect, start) => {
       if (effect.kind === 'void-arm') arms.end({ labId: start.labId, rigId: start.rigId }, effect.reason, engineItself);
@@ -68,9 +79,11 @@ export function buildRigSide(
     linkOf: (rigId) => stations.get(rigId)?.link ?? null,
     armOf: (rigId) => arms.armOf(rigId),
     takenBy: (rigId) => supervisor.takenBy(rigId),
+    lockedBy: (rigId) => locks.lockedBy(rigId),
     endArm: (rig, why, by) => arms.end(rig, why, by),
     onChange: onLine,
   });
+  const heed = heedLinks({ arms, arming, guided, log });
 
   /** Two drivers on one rig would be worse than none. */
   function letGo(): void {
@@ -80,17 +93,19 @@ export function buildRigSide(
     background.add(stations.close(), 'closing the lines');
   }
 
-  const known = new Map<string, boolean>();
+  return { arms, arming, locks, leases, stations, supervisor, guided, apparatus };
+}
 
-  /** Whatever lets people or surprises into the room, or loses the position, ends the arm, run or no run. */
-  function heedLink(station: RigStation, event: LinkEvent): void {
+/** What each line tells: whatever lets people or surprises into the room, or loses the position, ends the arm, run or no run. */
+function heedLinks({ arms, arming, guided, log }: Pick<RigSide, 'arms' | 'arming' | 'guided'> & { log: Logger }) {
+  const known = new Map<string, boolean>();
+  return (station: RigStation, event: LinkEvent): void => {
     const wasKnown = known.get(station.rigId) ?? false;
     const why = endOfArm(event, { wasKnown, armedBootId: arms.armOf(station.rigId)?.bootId ?? null });
     known.set(station.rigId, knownAfter(event, wasKnown));
     if (why !== null) arms.end(station, why, engineItself);
     if (event.kind === 'clock-stepped') log.warn({ rigId: station.rigId, clock: event.clock, byMs: event.byMs }, 'a clock stepped');
+    arming.heard(station.rigId, event);
     guided.heard(station.rigId, event);
-  }
-
-  return { arms, leases, stations, supervisor, guided, apparatus };
+  };
 }

@@ -63,6 +63,7 @@ class Life {
     for (const rig of await allRigs(db)) {
       if (!(await inside.leases.take({ labId: rig.labId, rigId: rig.id }))) return;
       await inside.arms.load({ labId: rig.labId, rigId: rig.id });
+      await inside.locks.load({ labId: rig.labId, rigId: rig.id });
       await inside.stations.put(rig);
     }
     inside.leases.renewRegularly();
@@ -96,7 +97,9 @@ class Life {
     await Promise.all([crewStopped, this.ticks?.stop()]);
     await inside.stations.close();
     await inside.apparatus.end();
+    inside.arming.close();
     inside.arms.close();
+    inside.locks.close();
     await inside.background.idle();
     await inside.leases.close();
   }

@@ -46,7 +46,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   const nowUtcMs = () => clock.utcMs();
   const samples = createSampleStore(database);
   const sessions = createSessions({ db: database.db, clock, newToken, sha256: sha256Hex });
-  const { arms, leases, stations, supervisor, guided, apparatus } = buildRigSide(parts, {
+  const { arms, arming, locks, leases, stations, supervisor, guided, apparatus } = buildRigSide(parts, {
     ...{ log, background, samples },
     onLine: (rigId) => lines.changed(rigId),
   });
@@ -61,7 +61,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   const workers = overrides.tasks === undefined ? createWorkerTasks() : null;
   const takenUp = openPromise();
   const services: Services = {
-    ...{ clock, log, database, sessions, access, samples, stations, arms, supervisor, guided, live, lines, newToken },
+    ...{ clock, log, database, sessions, access, samples, stations, arms, arming, locks, supervisor, guided, live, lines, newToken },
     config: { ...config, limits: { ...config.limits } },
     newId: randomUUID,
     sha256: sha256Hex,
@@ -85,7 +85,18 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   );
   return {
     services,
-    inside: { leases, arms, stations, apparatus, crew, background, tellTakenUp: takenUp.resolve, closeTasks: async () => workers?.close() },
+    inside: {
+      leases,
+      arms,
+      arming,
+      locks,
+      stations,
+      apparatus,
+      crew,
+      background,
+      tellTakenUp: takenUp.resolve,
+      closeTasks: async () => workers?.close(),
+    },
   };
 }
 

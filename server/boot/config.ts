@@ -23,6 +23,7 @@ const environmentSchema = z.object({
     .optional(),
   EVENFALL_TRUSTED_PROXIES: count(0, 10, 0),
   EVENFALL_DEMO: flag,
+  EVENFALL_VIRTUAL_EXIT_DELAY_S: count(1, 600, 120),
   EVENFALL_STATE_DIR: z.string().min(1).default(join(tmpdir(), 'evenfall')),
   EVENFALL_WEB_DIR: z.string().default('dist'),
   EVENFALL_SMTP_URL: z
@@ -60,6 +61,7 @@ export function readConfig(environment: Record<string, string | undefined>): Ser
     publicUrl: env.EVENFALL_PUBLIC_URL ?? null,
     trustedProxies: env.EVENFALL_TRUSTED_PROXIES,
     demo: env.EVENFALL_DEMO,
+    virtualExitDelayS: env.EVENFALL_VIRTUAL_EXIT_DELAY_S,
     stateDir: resolve(env.EVENFALL_STATE_DIR),
     webDir: env.EVENFALL_WEB_DIR === 'none' ? null : resolve(env.EVENFALL_WEB_DIR),
     smtpUrl: env.EVENFALL_SMTP_URL ?? null,

@@ -64,7 +64,8 @@ export class ServerRigStations implements RigStations {
     const factory = outside ?? (apparatus as SimulatedApparatus).factory;
     const link = createLink({ factory, clock, rig: motion, epoch });
     const channel = apparatus === null ? null : await this.simulatedChannel(rig);
-    const station: OpenStation = { labId: rig.labId, rigId: rig.id, settings: rig.link, link, channel, end: () => undefined };
+    const virtual = apparatus?.inputs ?? null;
+    const station: OpenStation = { labId: rig.labId, rigId: rig.id, settings: rig.link, link, channel, virtual, end: () => undefined };
     const unsubscribe = link.subscribe((event) => this.parts.onLinkEvent(station, event));
     const endFlow = apparatus === null || channel === null ? () => undefined : this.flow(apparatus, station, channel);
     station.end = () => {

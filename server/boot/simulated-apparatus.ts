@@ -4,6 +4,7 @@ import type { RigDocument, RigMotion } from '@/shared/rig/document';
 import { feedSimulatedBalance } from '../ingest/simulated-balance';
 import type { ByteLineFactory } from '../interfaces/byte-line';
 import type { Cancel, Clock } from '../interfaces/clock';
+import type { VirtualInputs } from '../interfaces/rig-stations';
 import type { SampleBatch } from '../interfaces/sample-store';
 import { createSimulatedController, type SimulatedController } from '../links/simulated-controller';
 import type { ApparatusMemory, ApparatusState } from './apparatus-memory';
@@ -44,6 +45,15 @@ export class SimulatedApparatus {
       });
     this.sources = JSON.stringify(document.sources);
     this.balance = this.newBalance(document);
+  }
+
+  /** Arm key and door: nobody can go there and turn them. */
+  get inputs(): VirtualInputs {
+    const { controller } = this;
+    return {
+      turnKey: (on) => controller.turnArmKey(on),
+      setDoor: (closed) => (closed ? controller.closeInterlock() : controller.openInterlock()),
+    };
   }
 
   get factory(): ByteLineFactory {

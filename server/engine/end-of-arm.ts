@@ -11,6 +11,8 @@ export function endOfArm(event: LinkEvent, { wasKnown, armedBootId }: { wasKnown
       return event.closed ? null : 'the interlock was opened';
     case 'supply':
       return event.present ? null : 'the motor supply was lost';
+    case 'arm-key':
+      return event.on ? null : 'the arm key was turned off';
     case 'reset':
       return 'the controller restarted';
     case 'standstill':
@@ -21,6 +23,7 @@ export function endOfArm(event: LinkEvent, { wasKnown, armedBootId }: { wasKnown
       if (armedBootId !== null && armedBootId !== controller.bootId) return 'the controller restarted';
       if (!controller.interlockClosed) return 'the interlock is open';
       if (!controller.supplyPresent) return 'the motor supply is off';
+      if (!controller.armKey) return 'the arm key is off';
       return wasKnown && !controller.positionKnown ? positionLost : null;
     }
     default:

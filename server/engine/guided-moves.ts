@@ -11,6 +11,8 @@ export interface GuidedParts {
   armOf(rigId: string): Arm | null;
   /** In a sentence, the run that has the rig; null while it is free. */
   takenBy(rigId: string): string | null;
+  /** In a sentence, whose personal locks are on the rig; null while there are none. */
+  lockedBy(rigId: string): string | null;
   /** A stop voids the arm. */
   endArm(rig: { labId: string; rigId: string }, why: string, by: Person): void;
   onChange(rigId: string): void;
@@ -28,7 +30,7 @@ export interface GuidedRig {
   motion: RigMotion;
 }
 
-export type GuidedRefusalCode = 'rig-busy' | 'not-armed' | 'not-ready' | 'not-possible-now' | 'invalid-input';
+export type GuidedRefusalCode = 'rig-busy' | 'locked' | 'not-armed' | 'not-ready' | 'not-possible-now' | 'invalid-input';
 
 /** An order that is refused, with a sentence that says what would be right. */
 export class GuidedRefused extends Error {
@@ -293,6 +295,7 @@ export class GuidedMoves {
       isUnderWay(session.state) &&
       this.isPresent(rigId) &&
       this.parts.armOf(rigId) !== null &&
+      this.parts.lockedBy(rigId) === null &&
       this.parts.takenBy(rigId) === null
     );
   }
@@ -311,6 +314,8 @@ export class GuidedMoves {
   private readyLink(rig: GuidedRig): TurntableLink {
     const taken = this.parts.takenBy(rig.rigId);
     if (taken !== null) throw new GuidedRefused('rig-busy', taken);
+    const lockedBy = this.parts.lockedBy(rig.rigId);
+    if (lockedBy !== null) throw new GuidedRefused('locked', lockedBy);
     const link = this.parts.linkOf(rig.rigId);
     const health = link?.health();
     const controller = link?.controller() ?? null;

@@ -86,13 +86,14 @@ export function noteSupply(draft: Draft): void {
   if (!present) noteGrave(draft, 'supply');
 }
 
-/** A person ended the arm: nothing of this run may move any more. */
+/** The arm was ended: nothing of this run may move any more. */
 export function noteArmEnded(draft: Draft): void {
   const { context } = draft;
+  const { why } = draft.told('arm-ended');
   const { name = 'the rig' } = context.arm ?? {};
-  draft.log('arm-ended', { name });
-  draft.because('arm-ended', `The arm of ${name} was ended. Arm the rig again on site, then resume.`);
-  context.armVoid = 'it was ended';
+  draft.log('arm-ended', { name, why });
+  draft.because('arm-ended', `The arm of ${name} was ended${why === '' ? '' : `: ${why}`}. Arm the rig again on site, then resume.`);
+  context.armVoid = why === '' ? 'it was ended' : why;
 }
 
 export function noteArmKey(draft: Draft): void {

@@ -17,6 +17,10 @@ export interface SupervisorParts {
   /** The open link of a rig; null while it has none. The same object for as long as a run may use it. */
   linkOf(rigId: string): TurntableLink | null;
   armOf(rigId: string): Arm | null;
+  /** Why nobody answers for a rig any more; empty where that is not known. */
+  whyDisarmed(rigId: string): string;
+  /** In a sentence, whose personal locks are on a rig; null while there are none. */
+  lockedBy(rigId: string): string | null;
   /** In a sentence, who moves the rig by hand; null while nobody does. */
   guidedBy(rigId: string): string | null;
   /** Notifications and the end of the arm. */
@@ -25,7 +29,7 @@ export interface SupervisorParts {
   onError?(error: unknown, start: RunStart): void;
 }
 
-export type StartRefusalCode = 'rig-busy' | 'not-armed' | 'not-ready' | 'protocol-refused' | 'not-yet';
+export type StartRefusalCode = 'rig-busy' | 'locked' | 'not-armed' | 'not-ready' | 'protocol-refused' | 'not-yet';
 
 /** A start that is refused, with a sentence that says what would be right. */
 export class StartRefused extends Error {
@@ -167,7 +171,7 @@ export class RigSupervisor {
   }
 
   private drive(start: RunStart, stored: StoredRun | null, link: TurntableLink): RunDriver {
-    const { store, clock, sha256, armOf, perform, onError } = this.parts;
+    const { store, clock, sha256, armOf, whyDisarmed, lockedBy, perform, onError } = this.parts;
     const driver = new RunDriver({
       start,
       stored,
@@ -176,6 +180,8 @@ export class RigSupervisor {
       sha256,
       link,
       armNow: () => armOf(start.rigId),
+      whyDisarmed: () => whyDisarmed(start.rigId),
+      lockedBy: () => lockedBy(start.rigId),
       perform: (effect) => perform(effect, start),
       onError: (error) => onError?.(error, start),
     });
@@ -190,6 +196,8 @@ export class RigSupervisor {
   private assertFree(rigId: string): void {
     const why = this.takenBy(rigId) ?? this.parts.guidedBy(rigId);
     if (why !== null) throw new StartRefused('rig-busy', why);
+    const lockedBy = this.parts.lockedBy(rigId);
+    if (lockedBy !== null) throw new StartRefused('locked', lockedBy);
   }
 
   private readyLink(rigId: string): TurntableLink {

@@ -182,8 +182,8 @@ export type RunEvent =
   | Told<'stop', { by: string; acted: string | null }>
   | Told<'hold-after-dwell', { by: string }>
   | Told<'resume', { by: string; arm: Arm | null }>
-  /** A person ended the arm of the rig before its time. */
-  | Told<'arm-ended'>
+  /** The arm of the rig was ended before its time, by a person or by what happened at the rig. */
+  | Told<'arm-ended', { why: string }>
   | Told<'server-restarted', { aliveUtcMs: number }>
   | Told<'database-away', { sinceUtcMs: number }>
   /** A motion that was saved but, because a hold or stop overtook it, never sent. */

@@ -23,6 +23,10 @@ export interface RunDriverParts {
   sha256: Sha256;
   /** The arm of the rig now; null when nobody answers for it. */
   armNow(): Arm | null;
+  /** Why nobody answers for it any more; a rehearsal has nobody, nor anybody's hands in it. */
+  whyDisarmed?(): string;
+  /** In a sentence, whose personal locks are on the rig; null while there are none. */
+  lockedBy?(): string | null;
   /** Notifications and the end of the arm, performed after they were saved. */
   perform(effect: OwnEffect): void;
   /** An error that is nobody's answer: of a listener, of `perform`, or one that made the driver let go of the run. */
@@ -134,7 +138,7 @@ export class RunDriver {
     const now = this.now();
     const standing = this.parts.armNow();
     const arm = standing === null ? null : { name: standing.name, untilUtcMs: standing.untilUtcMs };
-    const allowed = mayResume(this.parts.start, this.snapshot, { utcMs: now.utcMs, arm });
+    const allowed = mayResume(this.parts.start, this.snapshot, { utcMs: now.utcMs, arm, lockedBy: this.lockedBy() });
     if (!allowed.ok) return { ok: false, why: allowed.why };
     const result = await new Promise<Advance | null>((done) => this.enqueue({ event: { type: 'resume', at: now, by, arm }, done }));
     const refusal = result?.events.find(({ kind }) => kind === 'resume-refused');
@@ -152,6 +156,7 @@ export class RunDriver {
       snapshot: this.snapshot,
       nowUtcMs,
       arm: armNow(),
+      lockedBy: this.lockedBy(),
       lastSeq: this.chain.seq,
       predictedEndUtcMs: this.predict(this.snapshot, nowUtcMs),
       dwellsPlanned: this.dwellsPlanned,
@@ -311,9 +316,13 @@ export class RunDriver {
     this.parts.link.send(command);
   }
 
-  /** A hold or stop is under way, the database is away, or the rig is armed no more: nothing is set in motion. */
+  /** A hold or stop is under way, the database is away, hands are in the rig, or it is armed no more: nothing is set in motion. */
   private mayNotMove(): boolean {
-    return this.halting > 0 || this.databaseAwaySinceUtcMs !== null || this.isDisarmed();
+    return this.halting > 0 || this.databaseAwaySinceUtcMs !== null || this.lockedBy() !== null || this.isDisarmed();
+  }
+
+  private lockedBy(): string | null {
+    return this.parts.lockedBy?.() ?? null;
   }
 
   private isDisarmed(): boolean {
@@ -323,7 +332,7 @@ export class RunDriver {
   private noticeEndOfArm(): void {
     if (this.closed || !isUnderWay(this.snapshot) || !this.isDisarmed()) return;
     if (this.inbox.some((item) => typeof item !== 'string' && item.event.type === 'arm-ended')) return;
-    this.inbox.push({ event: { type: 'arm-ended', at: this.now() } });
+    this.inbox.push({ event: { type: 'arm-ended', at: this.now(), why: this.parts.whyDisarmed?.() ?? '' } });
   }
 
   /** The write goes on being tried; meanwhile nothing may move. */

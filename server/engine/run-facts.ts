@@ -62,10 +62,18 @@ export function summaryOf(snapshot: RunSnapshot, predictedEndUtcMs: number | nul
   return { state: runStateOf(snapshot), outcome: outcomes[snapshot.state] ?? null, startedAtUtcMs, endedAtUtcMs, predictedEndUtcMs };
 }
 
+interface Now {
+  utcMs: number;
+  arm: Arm | null;
+  /** In a sentence, whose personal locks are on the rig. */
+  lockedBy: string | null;
+}
+
 /** Whether a person could resume now, and if not, what stands in the way. */
-export function mayResume(start: RunStart, snapshot: RunSnapshot, now: { utcMs: number; arm: Arm | null }): { ok: boolean; why: string } {
+export function mayResume(start: RunStart, snapshot: RunSnapshot, now: Now): { ok: boolean; why: string } {
   if (snapshot.state === 'holding') return { ok: false, why: 'The run is still coming to rest.' };
   if (snapshot.state !== 'held') return { ok: false, why: 'The run is not held.' };
+  if (now.lockedBy !== null) return { ok: false, why: now.lockedBy };
   const event = { type: 'resume' as const, at: { utcMs: now.utcMs, uS: 0 }, by: '', arm: now.arm };
   const why = resumeRefusal(new Draft(start, event, { context: snapshot.context, out: nothingOut }));
   return { ok: why === null, why: why ?? '' };
@@ -76,12 +84,13 @@ export interface FactsInput {
   snapshot: RunSnapshot;
   nowUtcMs: number;
   arm: Arm | null;
+  lockedBy: string | null;
   lastSeq: number;
   predictedEndUtcMs: number | null;
   dwellsPlanned: number;
 }
 
-export function factsOf({ start, snapshot, nowUtcMs, arm, lastSeq, predictedEndUtcMs, dwellsPlanned }: FactsInput): RunFacts {
+export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, predictedEndUtcMs, dwellsPlanned }: FactsInput): RunFacts {
   const { context } = snapshot;
   const open = context.step !== null && context.step.row.outcome === null ? context.step.row : null;
   const { intervention } = context;
@@ -107,7 +116,7 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lastSeq, predictedEndU
             serverAtUtcMs: intervention.serverAtUtcMs,
             confirmedAtUtcMs: intervention.confirmedAtUtcMs,
           },
-    mayResume: mayResume(start, snapshot, { utcMs: nowUtcMs, arm }),
+    mayResume: mayResume(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy }),
     lastSeq,
   };
 }

@@ -1,4 +1,5 @@
 import type { RunStart } from '@/shared/archive/run-records';
+import type { ProblemCode } from '@/shared/contracts/problem';
 import { CODATA_2022_G } from '@/shared/physics/constants';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { checkProtocol } from '@/shared/protocol/check';
@@ -60,12 +61,15 @@ function runStartOf({ me, membership, services }: Caller, begin: Begin): Omit<Ru
   };
 }
 
+/** Checks whose refusal has a code of its own. */
+const codes: Readonly<Record<string, ProblemCode>> = { free: 'rig-busy', lock: 'locked', armed: 'not-armed', cautions: 'not-signed' };
+
 function refusalOfChecks({ checks }: StartReport): ProblemError | null {
   const failed = checks.filter(({ state }) => state === 'fail');
   const [first] = failed;
   if (first === undefined) return null;
-  const code = failed.some((check) => check.code === 'free') ? 'rig-busy' : first.code === 'armed' ? 'not-armed' : 'not-ready';
-  const leading = code === 'rig-busy' ? (failed.find((check) => check.code === 'free') ?? first) : first;
+  const leading = ['free', 'lock'].map((of) => failed.find(({ code }) => code === of)).find((check) => check !== undefined) ?? first;
+  const code = codes[leading.code] ?? 'not-ready';
   const more = failed.length > 1 ? ` ${String(failed.length - 1)} more stand against a start.` : '';
   return new ProblemError(
     code,
@@ -85,6 +89,7 @@ export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSet
     document,
     protocol: begin.protocol,
     timeZone: caller.membership.timeZone,
+    userId: caller.me.userId,
   });
   const stands = refusalOfChecks(report);
   if (stands !== null) throw stands;

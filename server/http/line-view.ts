@@ -5,7 +5,7 @@ import type { GuidedOrder } from '../engine/guided-state';
 import type { RigStation } from '../interfaces/rig-stations';
 import type { ControllerLimits, LinkHealth } from '../interfaces/turntable-link';
 import { isoOf, isoOrNull } from './maker';
-import { armViewOf } from './rig-view';
+import { standingOf } from './rig-view';
 import type { Services } from './services';
 
 const healthOf = (health: LinkHealth): LinkHealthView => ({
@@ -64,9 +64,9 @@ const haltViewOf = ({ kind, by, serverAtUtcMs, confirmedAtUtcMs }: Halt) => ({
 export function lineOf(services: Services, { labId, rigId }: { labId: string; rigId: string }): LineMessage | null {
   const station: RigStation | null = services.stations.get(rigId);
   if (station?.labId !== labId) return null;
-  const { clock, arms, guided, supervisor } = services;
+  const { clock, guided, supervisor } = services;
   const { link, settings } = station;
-  const [arm, session, halt, limits] = [arms.armOf(rigId), guided.of(rigId), guided.haltOf(rigId), link.limits()];
+  const [session, halt, limits] = [guided.of(rigId), guided.haltOf(rigId), link.limits()];
   return {
     serverAt: isoOf(clock.utcMs()),
     beat: clock.monotonicMs(),
@@ -74,7 +74,7 @@ export function lineOf(services: Services, { labId, rigId }: { labId: string; ri
     health: healthOf(link.health()),
     controller: link.controller(),
     limits: limits === null ? null : limitsViewOf(limits),
-    arm: arm === null ? null : armViewOf(arm),
+    ...standingOf(services, rigId),
     takenBy: supervisor.takenBy(rigId),
     guided: session === null ? null : guidedViewOf(services, session),
     halt: halt === null ? null : haltViewOf(halt),

@@ -1,8 +1,12 @@
-import type { ArmView, RigLive, RigSummary, RigView } from '@/shared/contracts/rigs';
+import type { RigLive, RigSummary, RigView } from '@/shared/contracts/rigs';
+import type { ArmingView, ArmView, LockView, SignatureView } from '@/shared/contracts/standing';
+import type { ArmingNow } from '../engine/arming';
 import type { StandingArm } from '../interfaces/arm-keeper';
+import type { PersonalLock } from '../interfaces/lock-keeper';
 import type { RigStation } from '../interfaces/rig-stations';
 import type { KnownPosition } from '../engine/run-context';
 import { restored } from '../engine/stored-snapshot';
+import { signaturesOf, type SignatureRow } from '../store/locks';
 import { listMassSets, type RigRecord } from '../store/rigs';
 import { activeRuns, newestSnapshots, type RunListRow } from '../store/runs-read';
 import { isoOf, isoOrNull } from './maker';
@@ -34,6 +38,7 @@ function rigLiveOf(station: RigStation | null): RigLive {
       moving: false,
       interlockClosed: null,
       supplyPresent: null,
+      armKey: null,
       driversOn: null,
     };
   const health = station.link.health();
@@ -49,11 +54,12 @@ function rigLiveOf(station: RigStation | null): RigLive {
     moving: controller?.moving ?? false,
     interlockClosed: controller?.interlockClosed ?? null,
     supplyPresent: controller?.supplyPresent ?? null,
+    armKey: controller?.armKey ?? null,
     driversOn: controller?.driversOn ?? null,
   };
 }
 
-export const armViewOf = (arm: StandingArm): ArmView => ({
+const armViewOf = (arm: StandingArm): ArmView => ({
   id: arm.id,
   name: arm.name,
   from: isoOf(arm.fromUtcMs),
@@ -61,15 +67,50 @@ export const armViewOf = (arm: StandingArm): ArmView => ({
   note: arm.note,
 });
 
+export const armingViewOf = ({ request, stage, endsUtcMs }: ArmingNow): ArmingView => ({
+  name: request.name,
+  until: isoOf(request.untilUtcMs),
+  stage,
+  endsAt: isoOf(endsUtcMs),
+});
+
+export const lockViewOf = ({ id, userId, name, note, setUtcMs }: PersonalLock): LockView => ({
+  id,
+  userId,
+  name,
+  note,
+  since: isoOf(setUtcMs),
+});
+
+export const signatureViewOf = ({ userId, name, version, signedAt }: SignatureRow): SignatureView => ({
+  userId,
+  name,
+  version,
+  at: isoOf(signedAt),
+});
+
+/** Whether and for whom the rig may be set in motion, out of memory alone. */
+export function standingOf(
+  { arms, arming, locks }: Pick<Services, 'arms' | 'arming' | 'locks'>,
+  rigId: string,
+): Pick<RigSummary, 'arm' | 'arming' | 'disarmed' | 'locks'> {
+  const [arm, going, ended] = [arms.armOf(rigId), arming.of(rigId), arms.endedOf(rigId)];
+  return {
+    arm: arm === null ? null : armViewOf(arm),
+    arming: going === null ? null : armingViewOf(going),
+    disarmed: ended === null ? null : { name: ended.name, why: ended.why, at: isoOf(ended.atUtcMs) },
+    locks: locks.locksOf(rigId).map(lockViewOf),
+  };
+}
+
 export function rigSummaryOf(services: Services, rig: RigRecord, run: RunListRow | undefined): RigSummary {
-  const arm = services.arms.armOf(rig.id);
   return {
     id: rig.id,
     name: rig.name,
     revision: rig.revision,
     link: rig.link,
     live: rigLiveOf(services.stations.get(rig.id)),
-    arm: arm === null ? null : armViewOf(arm),
+    ...standingOf(services, rig.id),
     activeRun:
       run === undefined
         ? null
@@ -84,6 +125,7 @@ export async function rigViewOf(services: Services, rig: RigRecord): Promise<Rig
     ...rigSummaryOf(services, rig, runs.get(rig.id)),
     document: rig.document,
     massSets: await listMassSets(db, rig.labId, rig.id),
+    signatures: (await signaturesOf(db, { labId: rig.labId, rigId: rig.id })).map(signatureViewOf),
     position: await positionOf(services, rig),
   };
 }

@@ -76,6 +76,7 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
       snapshot,
       nowUtcMs: services.clock.utcMs(),
       arm: null,
+      lockedBy: null,
       lastSeq: run.lastSeq,
       predictedEndUtcMs: run.predictedEndAt,
       dwellsPlanned,

@@ -1,10 +1,12 @@
 import type { Logger } from 'pino';
+import type { Arming } from '../engine/arming';
 import type { GuidedMoves } from '../engine/guided-moves';
 import type { RigSupervisor } from '../engine/rig-supervisor';
 import type { ArmKeeper } from '../interfaces/arm-keeper';
 import type { Clock } from '../interfaces/clock';
 import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { IdempotencyPort } from '../interfaces/idempotency';
+import type { LockKeeper } from '../interfaces/lock-keeper';
 import type { MailPort } from '../interfaces/mail';
 import type { RigStations } from '../interfaces/rig-stations';
 import type { SampleStore } from '../interfaces/sample-store';
@@ -35,6 +37,8 @@ export interface Services {
   samples: SampleStore;
   stations: RigStations;
   arms: ArmKeeper;
+  arming: Arming;
+  locks: LockKeeper;
   supervisor: RigSupervisor;
   guided: GuidedMoves;
   activeRuns: ActiveRuns;

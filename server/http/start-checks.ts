@@ -3,11 +3,13 @@ import { formatDegrees } from '@/shared/lib/format-angle';
 import { formatDayAndClock } from '@/shared/lib/format-time';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { planTimeline, type Timeline, type TimelineItem } from '@/shared/protocol/timeline';
+import { cautionsVersion } from '@/shared/rig/cautions';
 import type { RigDocument } from '@/shared/rig/document';
 import { checkAtStart } from '../engine/check-at-start';
 import type { RigStation } from '../interfaces/rig-stations';
 import type { ControllerState } from '../interfaces/turntable-link';
 import type { RigRecord } from '../store/rigs';
+import { signaturesOf } from '../store/locks';
 import { activeRuns, lastSampleUtcMs, type RunListRow } from '../store/runs-read';
 import type { Services } from './services';
 
@@ -17,6 +19,8 @@ export interface StartPlan {
   document: RigDocument;
   protocol: ProtocolDocument;
   timeZone: string;
+  /** Who would start. */
+  userId: string;
 }
 
 export interface StartReport {
@@ -72,8 +76,9 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
     check('protocol', 'Protocol on this rig', protocolCheck(plan, controller, nowUtcMs)),
     check('data', 'Deflection', await dataCheck(services, station, nowUtcMs)),
     check('free', 'No other run', freeCheck(services, plan.rig.id, runs.get(plan.rig.id))),
+    check('lock', 'Nobody at the rig', lockCheck(services, plan)),
     check('armed', 'Armed on site', armedCheck(services, plan, timeline)),
-    check('cautions', 'Cautions', cautionsCheck(services, plan)),
+    check('cautions', 'Cautions', await cautionsCheck(services, plan)),
   ];
   return {
     checks,
@@ -138,7 +143,7 @@ export const busyWords = (run: RunListRow): string =>
 
 function armedCheck(services: Services, { rig, timeZone }: StartPlan, timeline: Timeline) {
   const arm = services.arms.armOf(rig.id);
-  if (arm === null) return fail('Nobody on site answers for the rig: arm it there first.');
+  if (arm === null) return fail(notArmed(services, rig.id));
   const until = formatDayAndClock(arm.untilUtcMs, timeZone);
   if (arm.untilUtcMs > timeline.endUtcMs) return pass(`By ${arm.name} until ${until}.`);
   return fail(
@@ -146,9 +151,21 @@ function armedCheck(services: Services, { rig, timeZone }: StartPlan, timeline: 
   );
 }
 
-function cautionsCheck(services: Services, { rig }: StartPlan) {
-  const arm = services.arms.armOf(rig.id);
-  return arm === null ? note('They are read and signed when the rig is armed.') : pass(`Read by ${arm.name} when arming.`);
+function notArmed(services: Services, rigId: string): string {
+  const ended = services.arms.endedOf(rigId);
+  return `Nobody on site answers for the rig: arm it there first.${ended === null ? '' : ` The last time: ${ended.why}.`}`;
+}
+
+function lockCheck(services: Services, { rig }: StartPlan) {
+  const lockedBy = services.locks.lockedBy(rig.id);
+  return lockedBy === null ? pass('No personal lock is set.') : fail(lockedBy);
+}
+
+async function cautionsCheck(services: Services, { rig, userId }: StartPlan) {
+  const signatures = await signaturesOf(services.database.db, { labId: rig.labId, rigId: rig.id });
+  return signatures.some((each) => each.userId === userId && each.version === cautionsVersion)
+    ? pass('Signed by you for this rig.')
+    : fail('You have not signed the cautions for this rig in their present words: read and sign them.');
 }
 
 const moves = (item: TimelineItem) => item.kind === 'home' || item.kind === 'swing';

@@ -9,12 +9,19 @@ export interface StandingArm {
   bootId: string | null;
 }
 
+/** Why nobody answers for the rig any more. */
+export interface EndedArm {
+  name: string;
+  why: string;
+  atUtcMs: number;
+}
+
 /** Arms in memory, so that the engine can ask at any instant; the database holds the same. */
 export interface ArmKeeper {
   /** The arm that holds now, or null. */
   armOf(rigId: string): StandingArm | null;
-  /** After an arm was stored. */
-  set(rigId: string, arm: StandingArm): void;
+  /** How the last arm ended, or why the last arming came to nothing; null while an arm stands or none ever did. */
+  endedOf(rigId: string): EndedArm | null;
   /** Ends the arm at once, and in the database as soon as it can be reached. */
   end(rig: { labId: string; rigId: string }, why: string, by: { id: string | null; name: string }): void;
 }

@@ -11,6 +11,13 @@ export interface RigStation {
   link: TurntableLink;
   /** Channel that the rig itself fills; null where data come from outside. */
   channel: { id: string; name: string; unit: string } | null;
+  /** Arm key and door of a rig that is part of this server; null where they are real and turned at the rig. */
+  virtual: VirtualInputs | null;
+}
+
+export interface VirtualInputs {
+  turnKey(on: boolean): void;
+  setDoor(closed: boolean): void;
 }
 
 export interface StationRig {

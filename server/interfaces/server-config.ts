@@ -12,6 +12,8 @@ export interface ServerConfig {
   trustedProxies: number;
   /** Demo lab and demo accounts exist, mails are written as files. */
   demo: boolean;
+  /** Exit delay when a rig is armed that is part of this server, s; that of a real rig is always 2 min. */
+  virtualExitDelayS: number;
   /** Folder for what is not in the database: mails of the demo, journals. */
   stateDir: string;
   /** Folder of the built web application; null: none is served. */

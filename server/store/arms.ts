@@ -44,6 +44,13 @@ export async function currentArm(db: Handle, where: { labId: string; rigId: stri
   return rows[0] ?? null;
 }
 
+/** The arm that was given last, whether or not it still holds. */
+export async function newestArm(db: Handle, where: { labId: string; rigId: string }): Promise<Arm | null> {
+  const own = and(eq(arms.labId, where.labId), eq(arms.rigId, where.rigId));
+  const rows = await db.select().from(arms).where(own).orderBy(desc(arms.fromAt)).limit(1);
+  return rows[0] ?? null;
+}
+
 /** Ends the arm that stands, saying why; null when none did. */
 export async function endArm(db: Handle, where: { labId: string; rigId: string; nowUtcMs: number; why: string }): Promise<Arm | null> {
   const rows = await db

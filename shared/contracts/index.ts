@@ -7,11 +7,12 @@ import * as rigs from './rigs';
 import type { RouteContract } from './route';
 import * as runs from './runs';
 import * as service from './service';
+import * as standing from './standing';
 
 const isRoute = (value: unknown): value is RouteContract =>
   typeof value === 'object' && value !== null && 'method' in value && 'path' in value && 'access' in value;
 
 /** Every route of the API, once. */
-export const routes: readonly RouteContract[] = [service, people, rigs, link, protocols, runs, data, evaluations].flatMap((module) =>
-  Object.values(module).filter(isRoute),
+export const routes: readonly RouteContract[] = [service, people, rigs, standing, link, protocols, runs, data, evaluations].flatMap(
+  (module) => Object.values(module).filter(isRoute),
 );

@@ -1,7 +1,8 @@
 import * as z from 'zod';
 import { idSchema, instantSchema } from './common';
 import { defineRoute } from './route';
-import { armViewSchema, linkSettingsSchema, usbIdentitySchema } from './rigs';
+import { linkSettingsSchema, usbIdentitySchema } from './rigs';
+import { armingViewSchema, armViewSchema, disarmedViewSchema, lockViewSchema } from './standing';
 
 /** The line of a rig as it is now, and the small moves of a person who stands at the rig. */
 
@@ -102,6 +103,9 @@ export const lineMessageSchema = z.strictObject({
   /** As the controller itself keeps them; null before it has told. */
   limits: motionLimitsSchema.nullable(),
   arm: armViewSchema.nullable(),
+  arming: armingViewSchema.nullable(),
+  disarmed: disarmedViewSchema.nullable(),
+  locks: z.array(lockViewSchema),
   /** The run that has the rig, in a sentence; null while it is free. */
   takenBy: z.string().nullable(),
   guided: guidedViewSchema.nullable(),
@@ -119,6 +123,8 @@ const orderProblems = [
   'rig-busy',
   'not-armed',
   'not-ready',
+  'not-signed',
+  'locked',
   'not-possible-now',
   'key-reused',
   'still-running',
@@ -162,7 +168,8 @@ export const beginGuided = defineRoute({
   access: 'run.start',
   status: 201,
   idempotent: true,
-  body: z.strictObject({ cautionsRead: z.literal(true) }),
+  /** Whoever begins stands at the rig and sees the table. */
+  body: z.strictObject({ atTheRig: z.literal(true) }),
   response: guidedViewSchema,
   problems: orderProblems,
 });

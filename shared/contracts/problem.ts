@@ -11,6 +11,8 @@ export const problemCodes = {
   'not-found': 404,
   'rig-busy': 409,
   'not-armed': 409,
+  'not-signed': 409,
+  locked: 409,
   'not-ready': 409,
   'not-possible-now': 409,
   'already-exists': 409,

@@ -3,6 +3,7 @@ import { rigDocumentSchema } from '../rig/document';
 import { idSchema, instantSchema } from './common';
 import { positionViewSchema } from './position';
 import { defineRoute } from './route';
+import { signatureViewSchema, standingSchemas } from './standing';
 
 const portFields = {
   baudRate: z.number().int().min(300).max(1_000_000).default(115200),
@@ -56,19 +57,10 @@ export const rigLiveSchema = z.strictObject({
   moving: z.boolean(),
   interlockClosed: z.boolean().nullable(),
   supplyPresent: z.boolean().nullable(),
+  armKey: z.boolean().nullable(),
   driversOn: z.boolean().nullable(),
 });
 export type RigLive = z.infer<typeof rigLiveSchema>;
-
-/** Somebody on site answers for the rig until `until`. */
-export const armViewSchema = z.strictObject({
-  id: idSchema,
-  name: z.string(),
-  from: instantSchema,
-  until: instantSchema,
-  note: z.string(),
-});
-export type ArmView = z.infer<typeof armViewSchema>;
 
 export const massSetViewSchema = z.strictObject({ id: idSchema, label: z.string(), sources: rigDocumentSchema.shape.sources });
 export type MassSetView = z.infer<typeof massSetViewSchema>;
@@ -79,12 +71,14 @@ export const rigSummarySchema = z.strictObject({
   revision: z.number().int(),
   link: linkSettingsSchema,
   live: rigLiveSchema,
-  arm: armViewSchema.nullable(),
+  ...standingSchemas,
   activeRun: z.strictObject({ id: idSchema, state: z.string(), protocolName: z.string() }).nullable(),
 });
 export const rigViewSchema = rigSummarySchema.extend({
   document: rigDocumentSchema,
   massSets: z.array(massSetViewSchema),
+  /** Who has signed the cautions for this rig, the newest first. */
+  signatures: z.array(signatureViewSchema),
   /** What the newest run that met the home edge says of the position; null before the first. */
   position: positionViewSchema.extend({ runId: idSchema }).nullable(),
 });
@@ -177,32 +171,6 @@ export const tryLink = defineRoute({
   body: linkSettingsSchema,
   response: z.strictObject({ ok: z.boolean(), detail: z.string(), firmware: z.string().nullable() }),
   problems: ['invalid-input', 'not-found', 'rig-busy'],
-});
-export const arm = defineRoute({
-  name: 'arm',
-  summary: 'Arm the rig: a named person on site answers for it until a time at most 72 h ahead',
-  method: 'POST',
-  path: `${rigPath}/arm`,
-  access: 'rig.arm',
-  status: 201,
-  idempotent: true,
-  body: z.strictObject({
-    name: z.string().min(1).max(120),
-    until: instantSchema,
-    note: z.string().max(500).default(''),
-    cautionsRead: z.literal(true),
-  }),
-  response: armViewSchema,
-  problems: ['invalid-input', 'not-found', 'not-ready'],
-});
-export const disarm = defineRoute({
-  name: 'disarm',
-  summary: 'End the arm',
-  method: 'DELETE',
-  path: `${rigPath}/arm`,
-  access: 'rig.arm',
-  status: 204,
-  problems: ['not-found'],
 });
 export const addMassSet = defineRoute({
   name: 'addMassSet',

@@ -127,6 +127,8 @@ export const liveMessageSchemas = {
     link: z.enum(['closed', 'opening', 'ready', 'lost', 'refused']),
     lastReplyAt: instantSchema.nullable(),
     angleDeg: z.number().nullable(),
+    /** In a sentence, whose personal locks are on the rig; null while there are none. */
+    lockedBy: z.string().nullable(),
   }),
 } as const;
 export type LiveMessages = { [K in keyof typeof liveMessageSchemas]: z.infer<(typeof liveMessageSchemas)[K]> };
@@ -172,6 +174,8 @@ export const startRun = defineRoute({
     'not-found',
     'rig-busy',
     'not-armed',
+    'not-signed',
+    'locked',
     'not-ready',
     'protocol-refused',
     'not-yet',
@@ -219,7 +223,7 @@ const intervention = <L extends string>(
     idempotent: true,
     body: command,
     response: accepted,
-    problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'key-reused', 'still-running'],
+    problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'locked', 'key-reused', 'still-running'],
   });
 export const holdRun = intervention('hold', {
   name: 'holdRun',

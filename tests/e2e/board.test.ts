@@ -39,10 +39,8 @@ test('a newcomer is told that the position is unknown, arms the rig, starts, and
   await hand.sees('Not known; the protocol homes first.');
   expect(await hand.isEnabled('start-run')).toBe(false);
   await hand.goes(`/rigs/${demoIds.rig}`, 'rig-screen');
-  await hand.taps('arm');
-  await hand.taps('arm-on-site');
-  await hand.taps('arm-cautions');
-  await hand.taps('arm-confirm');
+  await hand.asksToArm();
+  await hand.turnsVirtualKey();
   await hand.reads('armed-by', 'Armed by Casimir Thornquist');
   await hand.goes(`/rigs/${demoIds.rig}/start?protocol=${protocolId}`, 'start-screen');
   await until(() => hand.isEnabled('start-run'), 'the start to be allowed');

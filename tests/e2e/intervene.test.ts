@@ -44,18 +44,36 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.shoots('start-not-armed');
   });
 
-  chapter('whoever arms it signs the cautions', async () => {
+  chapter('whoever arms it signs the cautions, turns the key, and leaves through the door', async () => {
     await hand.taps('arm-here');
     await hand.at('arm-sheet').waitFor();
     for (const caution of ['Heavy masses', 'Lead', 'Laser', 'Belt and turntable', 'Mains', 'Emergency stop'])
       await hand.reads('arm-sheet', caution);
     expect(await hand.isEnabled('arm-confirm')).toBe(false);
     await hand.taps('arm-on-site');
-    expect(await hand.isEnabled('arm-confirm')).toBe(false);
-    await hand.taps('arm-cautions');
+    if (size === 'phone') {
+      expect(await hand.isEnabled('arm-confirm')).toBe(false);
+      await hand.taps(hand.page.getByTestId('arm-sheet').getByTestId('sign-cautions'));
+    }
+    await hand.reads('cautions-signed', /Signed by Ilse Marrowby for this rig, .*version 1/);
     await hand.shoots('arm');
     await hand.taps('arm-confirm');
     await hand.at('arm-sheet').waitFor({ state: 'detached' });
+    await hand.turnsVirtualKey();
+    await hand.taps('virtual-door');
+    await hand.reads('arming', 'The door is open now.');
+    await hand.shoots('arming');
+    await lab().pass(121);
+    await hand.reads('check-armed', 'The last time: the door was not closed when the exit delay was over');
+  });
+
+  chapter('with the door closed when the exit delay is over, the rig is armed', async () => {
+    await hand.asksToArm('arm-here');
+    await hand.turnsVirtualKey();
+    await hand.taps('virtual-door');
+    await hand.reads('arming', 'The door is closed now.');
+    await hand.reads('arming-left', /^[12]:\d\d$/);
+    await lab().pass(121);
     await hand.reads('check-armed', /By Ilse Marrowby until/);
     await until(() => hand.isEnabled('start-run'), 'the start to be allowed');
     await hand.at('start-run').scrollIntoViewIfNeeded();
@@ -154,7 +172,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
 
   chapter('after a stop the rig is no longer armed', async () => {
     await hand.goes(`/rigs/${demoIds.rig}`, 'rig-screen');
-    await hand.sees('Not armed.');
+    await hand.reads('disarmed', /Not armed since .*\(Ilse Marrowby\): the run was stopped\./);
     expect((await viewOf(runId)).state).toBe('stopped');
   });
 });

@@ -59,11 +59,11 @@ tell('nothing begins before the rig is armed and its key is on', async () => {
   await hand.taps('first-move-read');
   expect(await hand.isEnabled('begin-guided')).toBe(false);
   await hand.shoots('first-move-before');
+  await hand.asksToArm();
+  await hand.reads('arming', 'Turn the arm key on');
   turntable().turnArmKey(true);
-  await hand.taps('arm');
-  await hand.taps('arm-on-site');
-  await hand.taps('arm-cautions');
-  await hand.taps('arm-confirm');
+  await hand.reads('arming', 'Leave the room and close the door');
+  await lab().pass(121);
   await until(() => hand.isEnabled('begin-guided'), 'the first move to be allowed');
   await hand.taps('begin-guided');
   await hand.at('nudge-pad').waitFor();
@@ -151,6 +151,9 @@ tell('from a desk an operator sees the line, and what must hold before a first m
   await hand.taps('first-move');
   await hand.at('first-move-screen').waitFor();
   await hand.taps('first-move-read');
+  // Each signs for himself.
+  expect(await hand.isEnabled('begin-guided')).toBe(false);
+  await hand.taps('sign-cautions');
   await until(() => hand.isEnabled('begin-guided'), 'the first move to be allowed');
   await hand.taps('begin-guided');
   await until(() => hand.isEnabled('nudge-ccw'), 'the nudge to be allowed');

@@ -67,10 +67,11 @@ test('a run started in the browser drives the controller over a serial line, whi
   await hand.reads('rig-link-state', 'live');
   expect(server.services.stations.get(rigId)?.settings).toEqual({ kind: 'serial', path: controller.path, baudRate: 115_200 });
 
-  await hand.taps('arm');
-  await hand.taps('arm-on-site');
-  await hand.taps('arm-cautions');
-  await hand.taps('arm-confirm');
+  await hand.asksToArm();
+  await hand.reads('arming', 'Turn the arm key off first');
+  await controller.tell('key off');
+  await hand.reads('arming', 'Turn the arm key on');
+  await controller.tell('key on');
   await hand.reads('armed-by', 'Armed by Casimir Thornquist');
   await hand.goes(`/rigs/${rigId}/start?protocol=${protocolId}`, 'start-screen');
   await until(() => hand.isEnabled('start-run'), 'the start to be allowed');

@@ -9,14 +9,10 @@ import { VirtualClock } from '@/server/engine/virtual-clock';
 import type { RigStation, StationRig } from '@/server/interfaces/rig-stations';
 import type { ServerConfig } from '@/server/interfaces/server-config';
 import { createSimulatedController, type SimulatedController } from '@/server/links/simulated-controller';
-import { addMember, createUser } from '@/server/store/people';
-import { createLab } from '@/server/store/labs';
-import { createRig } from '@/server/store/rigs';
 import type { Role } from '@/shared/contracts/roles';
 import type { RunState, RunView } from '@/shared/contracts/runs';
-import { roles } from '@/shared/contracts/roles';
 import type { ProtocolDocument } from '@/shared/protocol/document';
-import { demoRigWide } from '@/shared/rig/demo-rigs';
+import { cautionsVersion } from '@/shared/rig/cautions';
 import type { TestDatabase } from './database';
 
 export const sha256 = (text: string) => createHash('sha256').update(text).digest('hex');
@@ -39,6 +35,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
   publicUrl: null,
   trustedProxies: 0,
   demo: true,
+  virtualExitDelayS: 120,
   stateDir: tmpdir(),
   webDir: null,
   smtpUrl: null,
@@ -232,12 +229,37 @@ export class LabServer {
     return this.as(who, 'POST', `/labs/${demoIds.lab}/runs/${runId}/${what}`).send(body);
   }
 
-  /** Arms the demo rig until `hours` from now. */
-  async arm(hours = 16, rigId: string = demoIds.rig): Promise<void> {
+  /** Signs the cautions of a rig as everybody who may set it in motion. */
+  async sign(rigId: string = demoIds.rig): Promise<void> {
+    for (const who of ['owner', 'keeper', 'operator'] as const)
+      await this.as(who, 'POST', `/labs/${demoIds.lab}/rigs/${rigId}/cautions`).send({ version: cautionsVersion }).expect(201);
+  }
+
+  /** Asks as the operator to arm the demo rig until `hours` from now; the key is not turned yet. */
+  askArm(hours = 16, rigId: string = demoIds.rig): request.Test {
     const until = new Date(this.clock.utcMs() + hours * 3_600_000).toISOString();
-    await this.as('operator', 'POST', `/labs/${demoIds.lab}/rigs/${rigId}/arm`)
-      .send({ name: 'Ilse Marrowby', until, cautionsRead: true })
-      .expect(201);
+    return this.as('operator', 'POST', `/labs/${demoIds.lab}/rigs/${rigId}/arm`).send({ name: 'Ilse Marrowby', until });
+  }
+
+  /** Turns the arm key off and on, as somebody at the rig does. */
+  async turnKey(rigId: string = demoIds.rig): Promise<void> {
+    for (const on of [false, true]) {
+      this.world.controller(rigId).turnArmKey(on);
+      await this.advance(200);
+    }
+  }
+
+  /** Arms the demo rig until `hours` from now: cautions, key, exit delay, closed door. */
+  async arm(hours = 16, rigId: string = demoIds.rig): Promise<void> {
+    await this.sign(rigId);
+    await this.askArm(hours, rigId).expect(202);
+    await this.turnKey(rigId);
+    const { arms } = this.services;
+    await this.advance(121_000, () => arms.armOf(rigId) !== null);
+    for (let turns = 0; turns < 20 && arms.armOf(rigId) === null; turns += 1) await this.advance(10);
+    // On a whole second: what a test writes in whole milliseconds is then exactly at the start of its run.
+    await this.advance(1000 - (this.clock.utcMs() % 1000));
+    if (arms.armOf(rigId) === null) throw new Error(`the rig is not armed: ${arms.endedOf(rigId)?.why ?? 'it says nothing'}`);
   }
 }
 
@@ -254,25 +276,3 @@ export const quickProtocol = (change: Partial<ProtocolDocument> = {}): ProtocolD
   ],
   ...change,
 });
-
-/** A second lab with a member of each role, who are strangers to the demo lab, and a rig without a line of its own. */
-export async function foreignLab(
-  database: TestDatabase,
-  nowUtcMs: number,
-): Promise<{ labId: string; rigId: string; userOf: Record<Role, string> }> {
-  const { db } = database.connection;
-  const lab = await createLab(db, { name: 'Harrowmere Physics Rooms', timeZone: 'Europe/Oslo', nowUtcMs });
-  const userOf = {} as Record<Role, string>;
-  for (const role of roles) {
-    const user = await createUser(db, { name: `Harrowmere ${role}`, email: `${role}@harrowmere.example`, passwordHash: 'none', nowUtcMs });
-    if (user === null) throw new Error('the account exists already');
-    userOf[role] = user.id;
-    await addMember(db, { labId: lab.id, userId: user.id, role, nowUtcMs });
-  }
-  const rigId = await createRig(
-    db,
-    { labId: lab.id, name: 'East pier', document: demoRigWide, link: { kind: 'simulated' }, massSetLabel: 'Tungsten' },
-    { userId: userOf.owner, name: 'Harrowmere owner', at: nowUtcMs },
-  );
-  return { labId: lab.id, rigId, userOf };
-}

@@ -2,6 +2,7 @@ import { randomUUID } from 'node:crypto';
 import { Agent, request } from 'node:http';
 import { demoIds } from '@/db/demo/seed';
 import type { RunView } from '@/shared/contracts/runs';
+import { cautionsVersion } from '@/shared/rig/cautions';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 
 interface Answer {
@@ -39,7 +40,7 @@ export class LabClient {
     return id;
   }
 
-  /** Waits until the simulated rig of a server that has just begun is ready for a start, and arms it for 12 h. */
+  /** Waits until the simulated rig of a server that has just begun is ready for a start, signs its cautions and arms it for 12 h. The server's exit delay is short. */
   async arm(): Promise<void> {
     const rig = `/labs/${demoIds.lab}/rigs/${demoIds.rig}`;
     await this.patiently('the link of the demo rig', async () => {
@@ -47,7 +48,16 @@ export class LabClient {
       return live.condition === 'ready' || null;
     });
     const until = new Date(Date.now() + 12 * 3_600_000).toISOString();
-    await this.post(`${rig}/arm`, { name: 'Ilse Marrowby', until, cautionsRead: true });
+    await this.post(`${rig}/cautions`, { version: cautionsVersion });
+    await this.post(`${rig}/arm`, { name: 'Ilse Marrowby', until });
+    for (const armKey of ['off', 'on']) {
+      await this.post(`${rig}/virtual`, { armKey });
+      await this.patiently('the arm key', async () => {
+        const { live } = (await this.get(rig)).body as { live: { armKey: boolean } };
+        return live.armKey === (armKey === 'on') || null;
+      });
+    }
+    await this.patiently('the exit delay', async () => ((await this.get(rig)).body as { arm: object | null }).arm);
   }
 
   /** Starts the first revision of a protocol on the demo rig as soon as the server lets it, and waits until it runs. Returns the run's id. */

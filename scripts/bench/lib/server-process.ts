@@ -32,6 +32,7 @@ export class ServerProcess {
         PORT: '0',
         EVENFALL_STATE_DIR: stateDir,
         EVENFALL_WEB_DIR: 'none',
+        EVENFALL_VIRTUAL_EXIT_DELAY_S: '1',
         EVENFALL_LOG_LEVEL: 'error',
         EVENFALL_REQUESTS_PER_MINUTE: '1000000',
         EVENFALL_INTERVENTIONS_PER_MINUTE: '1000000',

@@ -23,6 +23,7 @@ export function liveSourceOf(services: () => Services): LiveSource {
         link: health?.condition ?? 'closed',
         lastReplyAt: isoOrNull(health?.lastReplyUtcMs ?? null),
         angleDeg: link?.controller()?.angleDeg ?? null,
+        lockedBy: services().locks.lockedBy(rigId),
       };
     },
     mayStillRead: (reader, labId) => mayStillRead(services(), reader, labId),

@@ -1,4 +1,5 @@
 import type { MountedRoute } from '../route-context';
+import { armingRoutes } from './arming';
 import { dataRoutes } from './data';
 import { evaluationRoutes } from './evaluations';
 import { lineRoutes } from './line';
@@ -14,6 +15,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...serviceRoutes,
   ...peopleRoutes,
   ...rigRoutes,
+  ...armingRoutes,
   ...lineRoutes,
   ...protocolRoutes,
   ...runRoutes,

@@ -12,6 +12,7 @@ import { notFound, ProblemError } from '../problem-error';
 import { mount, type Membership, type SignedIn } from '../route-context';
 import type { Services } from '../services';
 import { knowsRevision } from '../rig-view';
+import { assertSigned } from './arming';
 
 type Caller = { me: SignedIn; membership: Membership; services: Services };
 
@@ -87,7 +88,9 @@ const guidedRoutes = [
 
   mount(contracts.beginGuided, async (context) => {
     const { me, services } = context;
-    const rig = guidedRig(await load(context, context.params.rigId));
+    const record = await load(context, context.params.rigId);
+    const rig = guidedRig(record);
+    await assertSigned(context, record);
     engine(() => services.guided.assertMayBegin(rig));
     const id = services.newId();
     const arm = services.arms.armOf(rig.rigId);

@@ -1,11 +1,10 @@
 import * as contracts from '@/shared/contracts/rigs';
-import { armRig, longestArmMs } from '@/server/store/arms';
 import * as store from '@/server/store/rigs';
 import { activeRuns } from '@/server/store/runs-read';
 import { audited } from '../audited';
 import { isoOf, makerOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
-import { armViewOf, knowsLink, knowsRevision, rigSummaryOf, rigTag, rigViewOf } from '../rig-view';
+import { knowsLink, knowsRevision, rigSummaryOf, rigTag, rigViewOf } from '../rig-view';
 import { mount, type Membership, type SignedIn } from '../route-context';
 import type { Services } from '../services';
 import { busyWords, makeStartChecks } from '../start-checks';
@@ -30,26 +29,6 @@ async function assertUntouched(services: Services, rig: store.RigRecord): Promis
   await assertFree(services, rig);
   const guidedBy = services.guided.takenBy(rig.id);
   if (guidedBy !== null) throw new ProblemError('rig-busy', guidedBy);
-}
-
-const shortestArmMs = 60_000;
-
-function armEnd(until: string, nowUtcMs: number): number {
-  const untilUtcMs = Date.parse(until);
-  const item = (message: string) => [{ path: 'until', message }];
-  if (untilUtcMs < nowUtcMs + shortestArmMs)
-    throw new ProblemError(
-      'invalid-input',
-      `The arm would end at ${until}, which is past or less than a minute ahead. Choose a later end.`,
-      item('an instant in the future'),
-    );
-  if (untilUtcMs > nowUtcMs + longestArmMs)
-    throw new ProblemError(
-      'invalid-input',
-      `The arm would end at ${until}, more than 72 h ahead. Nobody can answer for a rig for longer; choose an end before ${isoOf(nowUtcMs + longestArmMs)}.`,
-      item('at most 72 h ahead'),
-    );
-  return untilUtcMs;
 }
 
 const rigRouteList = [
@@ -147,39 +126,7 @@ const linkRoutes = [
   }),
 ];
 
-const armRoutes = [
-  mount(contracts.arm, async (context) => {
-    const { body, params, me, services } = context;
-    const rig = await load(context, params.rigId);
-    const nowUtcMs = services.clock.utcMs();
-    const untilUtcMs = armEnd(body.until, nowUtcMs);
-    const controller = services.stations.get(rig.id)?.link.controller() ?? null;
-    if (controller === null)
-      throw new ProblemError(
-        'not-ready',
-        `The controller of ${rig.name} does not answer, so nobody can say whether it is safe. See to the link first.`,
-      );
-    if (!controller.interlockClosed)
-      throw new ProblemError('not-ready', `The interlock of ${rig.name} is open. Leave the room, close the door, then arm.`);
-    if (!controller.supplyPresent)
-      throw new ProblemError('not-ready', `The motor supply of ${rig.name} is off. Switch it on at the rig, then arm.`);
-    const entry = { kind: 'rig.armed', data: () => ({ rigId: rig.id, name: body.name, until: body.until }) };
-    const { bootId } = controller;
-    const given = { name: body.name, note: body.note, armedById: me.userId, bootId, nowUtcMs, untilUtcMs };
-    const stored = await audited(context, entry, (tx) => armRig(tx, { labId: rig.labId, rigId: rig.id, ...given }));
-    const { id, name, note, fromAt, untilAt } = stored;
-    const arm = { id, name, note, fromUtcMs: fromAt, untilUtcMs: untilAt, bootId };
-    services.arms.set(rig.id, arm);
-    return armViewOf(arm);
-  }),
-
-  mount(contracts.disarm, async (context) => {
-    const rig = await load(context, context.params.rigId);
-    if (context.services.arms.armOf(rig.id) === null) throw new ProblemError('not-found', `${rig.name} is not armed.`);
-    context.services.arms.end({ labId: rig.labId, rigId: rig.id }, 'disarmed', { id: context.me.userId, name: context.me.name });
-    return undefined;
-  }),
-
+const planRoutes = [
   mount(contracts.addMassSet, async (context) => {
     const { body, params, services } = context;
     const rig = await load(context, params.rigId);
@@ -195,7 +142,7 @@ const armRoutes = [
   }),
 
   mount(contracts.startChecks, async (context) => {
-    const { query, params, membership, services } = context;
+    const { query, params, me, membership, services } = context;
     const rig = await load(context, params.rigId);
     const revision = await findRevision(services.database.db, { labId: membership.labId, protocolId: query.protocolId }, query.revision);
     if (revision === null) throw notFound('protocol revision');
@@ -204,6 +151,7 @@ const armRoutes = [
       document: rig.document,
       protocol: revision.document,
       timeZone: membership.timeZone,
+      userId: me.userId,
     });
     return {
       checks: report.checks,
@@ -215,4 +163,4 @@ const armRoutes = [
   }),
 ];
 
-export const rigRoutes = [...rigRouteList, ...linkRoutes, ...armRoutes];
+export const rigRoutes = [...rigRouteList, ...linkRoutes, ...planRoutes];

@@ -141,11 +141,11 @@ const interventionRoutes = [
     const driver = await driverOf(services, membership.labId, params.runId);
     const { rigId } = (services.activeRuns.find(membership.labId, params.runId) ?? { run: { rigId: '' } }).run;
     const answer = await driver.resume(me.name);
-    if (!answer.ok)
-      throw new ProblemError(
-        driver.state().state === 'held' && services.arms.armOf(rigId) === null ? 'not-armed' : 'not-possible-now',
-        answer.why,
-      );
+    if (!answer.ok) {
+      const locked = services.locks.lockedBy(rigId) !== null;
+      const disarmed = driver.state().state === 'held' && services.arms.armOf(rigId) === null;
+      throw new ProblemError(locked ? 'locked' : disarmed ? 'not-armed' : 'not-possible-now', answer.why);
+    }
     auditLater(context, 'run.resumed', { runId: params.runId });
     return accepted(params.runId, answer);
   }),

@@ -3,6 +3,7 @@ import { useSession } from '@/components/api';
 import { FirstMoveScreen } from '@/components/link/first-move-screen';
 import type { GuidedView, LineMessage } from '@/shared/contracts/link';
 import type { Role } from '@/shared/contracts/roles';
+import { cautionsVersion } from '@/shared/rig/cautions';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import type { RigDocument, RigMotion } from '@/shared/rig/document';
 import { params } from '../support/fake-router';
@@ -25,10 +26,11 @@ const live = {
     angleDeg: 0,
     moving: false,
   },
-  ...{ interlockClosed: true, supplyPresent: true, driversOn: true },
+  ...{ interlockClosed: true, supplyPresent: true, armKey: true, driversOn: true },
 };
 const rig = {
   ...{ id: 'rig-1', name: 'North bench', revision: 3, link: { kind: 'simulated' }, live, arm, activeRun: null },
+  ...{ arming: null, disarmed: null, locks: [], signatures: [{ userId: 'u1', name: 'Ada Thornfield', version: cautionsVersion, at }] },
   ...{ document: demoRigWide, massSets: [], position: null },
 };
 const controller = {
@@ -62,7 +64,7 @@ const line = (change: object = {}): LineMessage =>
       reconnects: 0,
       clock: { offsetMs: 12, uMs: 0.2 },
     },
-    ...{ controller, arm, takenBy: null, guided: null, halt: null },
+    ...{ controller, arm, arming: null, disarmed: null, locks: [], takenBy: null, guided: null, halt: null },
     limits: { minDeg: -81, maxDeg: 81, maxSpeed_deg_s: 4.5, maxAcceleration_deg_s2: 4.5, homeSpeed_deg_s: 2.25 },
     ...change,
   }) as LineMessage;
@@ -106,7 +108,7 @@ test('nothing begins before the cautions are read and everything holds that must
   lab.on(`POST ${path}/guided`, () => problem(409, 'not-armed', 'North bench is not armed.'));
   await press('begin-guided');
   await screen.findByText('North bench is not armed.');
-  expect(lab.requests(`POST ${path}/guided`)[0]?.body).toEqual({ cautionsRead: true });
+  expect(lab.requests(`POST ${path}/guided`)[0]?.body).toEqual({ atTheRig: true });
 });
 
 test('a viewer sees the conditions and is told who may move the rig', async () => {

@@ -20,6 +20,7 @@ const live = {
   moving: false,
   interlockClosed: null,
   supplyPresent: null,
+  armKey: null,
   driversOn: null,
 };
 const rig = {
@@ -29,6 +30,10 @@ const rig = {
   link: { kind: 'simulated' },
   live,
   arm: null,
+  arming: null,
+  disarmed: null,
+  locks: [],
+  signatures: [],
   activeRun: null,
   document: demoRigWide,
   massSets: [],

@@ -1,6 +1,8 @@
 import { act, fireEvent, screen } from '@testing-library/react';
 import { useSession } from '@/components/api';
 import { StartScreen } from '@/components/rigs/start-screen';
+import type { LockView } from '@/shared/contracts/standing';
+import { cautionsVersion } from '@/shared/rig/cautions';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { params, went } from '../support/fake-router';
 import { problem, showInLab, startFakeLab, type FakeLab } from '../support/fake-lab';
@@ -18,6 +20,7 @@ const live = {
   moving: false,
   interlockClosed: true,
   supplyPresent: true,
+  armKey: true,
   driversOn: true,
 };
 const arm = {
@@ -62,7 +65,7 @@ function Page() {
   return useSession().membership === null ? null : <StartScreen />;
 }
 
-async function open(options: { armed: boolean }): Promise<FakeLab> {
+async function open(options: { armed: boolean; locks?: LockView[] }): Promise<FakeLab> {
   const lab = startFakeLab('operator');
   const rig = {
     id: 'rig-1',
@@ -71,7 +74,8 @@ async function open(options: { armed: boolean }): Promise<FakeLab> {
     link: { kind: 'simulated' },
     live,
     arm: options.armed ? arm : null,
-    activeRun: null,
+    ...{ arming: null, disarmed: null, locks: options.locks ?? [], activeRun: null },
+    signatures: [{ userId: 'u1', name: 'Ada Thornfield', version: cautionsVersion, at: '2031-03-01T09:00:00Z' }],
     document: demoRigWide,
     position: null,
     massSets: [{ id: 'm1', label: 'Lead spheres', sources: demoRigWide.sources }],
@@ -171,4 +175,11 @@ test('on a dead network a start fails at once and is not queued', async () => {
   lab.away = false;
   await wait(60_000);
   expect(sent(lab)).toEqual([]);
+});
+
+test('a personal lock stands large above everything', async () => {
+  const since = '2031-03-13T20:40:00Z';
+  await open({ armed: false, locks: [{ id: 'l1', userId: 'u7', name: 'Anna Fellstone', note: '', since }] });
+  expect(screen.getByTestId('locked-notice').textContent).toBe('Anna Fellstone has hands in the rig. Nothing moves.');
+  expect(screen.getByTestId('locked-notice').getAttribute('role')).toBe('alert');
 });

@@ -43,9 +43,13 @@ const live = {
   moving: false,
   interlockClosed: true,
   supplyPresent: true,
+  armKey: true,
   driversOn: true,
 };
-const rig = { id: 'rig-1', name: 'North bench', revision: 1, link: { kind: 'simulated' }, live, arm: null, activeRun: null };
+const rig = {
+  ...{ id: 'rig-1', name: 'North bench', revision: 1, link: { kind: 'simulated' }, live },
+  ...{ arm: null, arming: null, disarmed: null, locks: [], activeRun: null },
+};
 
 export interface EditorPage {
   lab: FakeLab;
@@ -72,7 +76,10 @@ export async function openEditor(role: Role = 'operator', document: ProtocolDocu
     revisions: [],
   });
   lab.on('GET /labs/lab-1/rigs', () => ({ body: { items: [rig] } }));
-  lab.on('GET /labs/lab-1/rigs/rig-1', () => ({ body: { ...rig, document: demoRigWide, massSets: [], position: null }, etag: '"r1"' }));
+  lab.on('GET /labs/lab-1/rigs/rig-1', () => ({
+    body: { ...rig, document: demoRigWide, massSets: [], signatures: [], position: null },
+    etag: '"r1"',
+  }));
   lab.on(`GET ${protocolPath}`, () => ({ body: view(), etag: `"${version}"` }));
   lab.on(`PUT ${protocolPath}`, ({ body, headers }) => {
     if (headers.get('if-match') !== `"${version}"`)

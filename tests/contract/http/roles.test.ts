@@ -4,7 +4,8 @@ import { problemCodes, problemSchema } from '@/shared/contracts/problem';
 import { acts, may, roles, type Act, type Role } from '@/shared/contracts/roles';
 import type { RouteContract } from '@/shared/contracts/route';
 import { databaseOfThisFile } from '@/tests/support/database';
-import { foreignLab, LabServer } from '@/tests/support/lab-server';
+import { foreignLab } from '@/tests/support/foreign-lab';
+import { LabServer } from '@/tests/support/lab-server';
 import { rows, shortProtocol, type Row, type Things } from './role-rows';
 
 const database = databaseOfThisFile();

@@ -138,6 +138,28 @@ export class Hand {
     return last;
   }
 
+  /** At the page of a rig or of a start: signs the cautions where that is still to be done, and asks to be armed. The key is not turned yet. */
+  async asksToArm(opener: 'arm' | 'arm-here' = 'arm'): Promise<void> {
+    await this.taps(opener);
+    await this.at('arm-sheet').waitFor();
+    const sheet = this.page.getByTestId('arm-sheet');
+    if ((await sheet.getByTestId('sign-cautions').count()) > 0) await this.taps(sheet.getByTestId('sign-cautions'));
+    await sheet.getByTestId('cautions-signed').waitFor();
+    await this.taps('arm-on-site');
+    await this.taps('arm-confirm');
+    await this.at('arming').waitFor();
+  }
+
+  /** Turns the virtual key of the demo's rig off and on. */
+  async turnsVirtualKey(): Promise<void> {
+    await this.reads('arming', 'Turn the arm key off first');
+    await this.taps('virtual-key');
+    await this.reads('arming', 'Turn the arm key on');
+    await this.reads('virtual-key', 'on');
+    await this.taps('virtual-key');
+    await this.reads('arming', 'Leave the room and close the door');
+  }
+
   async isEnabled(testId: string): Promise<boolean> {
     return this.at(testId).isEnabled();
   }

@@ -22,8 +22,13 @@ export class RealServer {
     const clock = new RealClock();
     const hashPassword = async () => 'no password in this test';
     await seedDemo(database.connection, { nowUtcMs: clock.utcMs(), hashPassword, sha256, link });
-    const config = testConfig(database, { webDir: join(__dirname, '../../../dist') });
-    const built = buildServer({ database: database.connection, clock, config, overrides: { tasks: heavyTasks, ticks: false } });
+    const config = testConfig(database, { webDir: join(__dirname, '../../../dist'), virtualExitDelayS: 1 });
+    const built = buildServer({
+      database: database.connection,
+      clock,
+      config,
+      overrides: { tasks: heavyTasks, ticks: false, exitDelayMs: 1_000 },
+    });
     await built.start();
     return new RealServer(await built.listen(), built, database);
   }

@@ -101,6 +101,7 @@ const testConfig = (stateDir: string, changes: Partial<ServerConfig>): ServerCon
   publicUrl: null,
   trustedProxies: 0,
   demo: false,
+  virtualExitDelayS: 120,
   stateDir,
   webDir: null,
   smtpUrl: null,

@@ -160,7 +160,7 @@ function eventOf(name: Name, from: { snapshot: RunSnapshot; now: number }): RunE
       controller: { ...controller, angleDeg: null, positionKnown: false },
       sameBoot: true,
     }),
-    disarmed: { type: 'arm-ended', at: now },
+    disarmed: { type: 'arm-ended', at: now, why: 'the arm key was turned off' },
     standstill: heard({ kind: 'standstill', at: now, commandId: 'acted-1', angleDeg: 20.18 }),
     stranger: heard({ kind: 'refused-controller', at: now, why: 'another major version' }),
     foreign: heard({ kind: 'motion-began', at: now, commandId: 'unknown', angleDeg: 3 }),

@@ -14,12 +14,13 @@ async function makeBench(motion: RigMotion = demoRigWide.motion as RigMotion, st
   const clock = new VirtualClock(startUtcMs, settle);
   const turntable = createSimulatedController({ clock, rig: motion, ...start });
   const link = createLink({ factory: turntable.factory, clock, rig: motion, epoch: 3 });
-  const world = { armed: true, run: null as string | null, ended: [] as string[] };
+  const world = { armed: true, run: null as string | null, lock: null as string | null, ended: [] as string[] };
   const moves = new GuidedMoves({
     clock,
     linkOf: () => link,
     armOf: () => (world.armed ? { name: 'Anna Fellstone', untilUtcMs: startUtcMs + 3_600_000 } : null),
     takenBy: () => world.run,
+    lockedBy: () => world.lock,
     endArm: (_rig, why) => {
       world.armed = false;
       world.ended.push(why);

@@ -46,6 +46,8 @@ function makeLab(): Lab {
       linkOf: (rigId) => links.get(rigId) ?? null,
       guidedBy: () => null,
       armOf: (rigId) => arms.get(rigId) ?? null,
+      whyDisarmed: () => '',
+      lockedBy: () => null,
       perform: (effect) => performed.push(effect),
     });
   const make = (more: Partial<RunStart> = {}) => runs.add(runStart(shortProtocol, more));

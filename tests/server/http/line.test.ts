@@ -33,7 +33,7 @@ async function stay(guidedId: string, seconds: number): Promise<void> {
 
 async function begin(): Promise<string> {
   await lab.arm(4);
-  return (await post('/guided', { cautionsRead: true }).expect(201)).body.id as string;
+  return (await post('/guided', { atTheRig: true }).expect(201)).body.id as string;
 }
 const end = (guidedId: string) => post('/guided/end', { guidedId }).expect(204);
 
@@ -41,18 +41,18 @@ jest.setTimeout(30_000);
 
 describe('a guided first move', () => {
   test('needs the cautions, the arm and the arm key', async () => {
-    expect((await post('/guided', {}).expect(400)).body.errors[0].path).toBe('cautionsRead');
-    expect((await post('/guided', { cautionsRead: true }).expect(409)).body).toMatchObject({
+    expect((await post('/guided', {}).expect(400)).body.errors[0].path).toBe('atTheRig');
+    expect((await post('/guided', { atTheRig: true }).expect(409)).body.code).toBe('not-signed');
+    await lab.sign();
+    expect((await post('/guided', { atTheRig: true }).expect(409)).body).toMatchObject({
       code: 'not-armed',
       detail: expect.stringContaining('North bench is not armed'),
     });
     await lab.arm(4);
     turntable().turnArmKey(false);
     await lab.advance(1_000);
-    expect((await post('/guided', { cautionsRead: true }).expect(409)).body).toMatchObject({
-      code: 'not-ready',
-      detail: expect.stringContaining('arm key on the controller is off'),
-    });
+    // The key that is turned off is the end of the arm.
+    expect((await post('/guided', { atTheRig: true }).expect(409)).body.code).toBe('not-armed');
     turntable().turnArmKey(true);
     await lab.advance(1_000);
   });
@@ -108,7 +108,7 @@ describe('a guided first move', () => {
     await end(guidedId);
     const run = await lab.askStart(protocolId).expect(201);
     await lab.advance(1_000);
-    expect((await post('/guided', { cautionsRead: true }).expect(409)).body.code).toBe('rig-busy');
+    expect((await post('/guided', { atTheRig: true }).expect(409)).body.code).toBe('rig-busy');
     // hold and stop of the rig reach its run
     await post('/hold', {}, 'viewer').expect(202);
     await lab.until(run.body.id as string, 'held');

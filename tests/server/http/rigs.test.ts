@@ -12,10 +12,6 @@ afterAll(() => lab.stop());
 
 const rigs = `/labs/${demoIds.lab}/rigs`;
 const rig = `${rigs}/${demoIds.rig}`;
-const hour = 3_600_000;
-const inHours = (hours: number) => new Date(lab.clock.utcMs() + hours * hour).toISOString();
-const arm = (body: object) => lab.as('operator', 'POST', `${rig}/arm`).send({ name: 'Ilse Marrowby', cautionsRead: true, ...body });
-const armOf = async () => (await lab.as('viewer', 'GET', rig).expect(200)).body.arm;
 const auditKinds = async () =>
   (await lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`).expect(200)).body.items.map(({ kind }: { kind: string }) => kind);
 
@@ -116,59 +112,9 @@ describe('the line', () => {
   });
 });
 
-describe('arming', () => {
-  test('names who answers for the rig, until when, and that the cautions were read', async () => {
-    const answer = await arm({ until: inHours(16), note: 'Door closed' }).expect(201);
-    expect(answer.body).toMatchObject({ name: 'Ilse Marrowby', until: inHours(16), from: inHours(0), note: 'Door closed' });
-    expect(await armOf()).toEqual(answer.body);
-    await lab.as('operator', 'DELETE', `${rig}/arm`).expect(204);
-    expect(await armOf()).toBeNull();
-    await lab.services.idle();
-    expect(await auditKinds()).toEqual(expect.arrayContaining(['rig.armed', 'rig.arm-ended']));
-  });
-
-  test('lasts 72 h at most and ends by itself', async () => {
-    expect((await arm({ until: inHours(72.1) }).expect(400)).body.detail).toContain('more than 72 h ahead');
-    expect((await arm({ until: inHours(-1) }).expect(400)).body.detail).toContain('past');
-    expect((await arm({ until: inHours(1), cautionsRead: false }).expect(400)).body.errors[0].path).toBe('cautionsRead');
-    await arm({ until: inHours(0.02) }).expect(201);
-    await lab.advance(0.021 * hour);
-    expect(await armOf()).toBeNull();
-  });
-
-  const turntable = () => lab.world.controller(demoIds.rig);
-  test.each([
-    { what: 'the interlock opens', happen: () => turntable().openInterlock(), undo: () => turntable().closeInterlock(), word: 'interlock' },
-    { what: 'the motor supply is lost', happen: () => turntable().loseSupply(), undo: () => turntable().returnSupply(), word: 'supply' },
-    { what: 'the controller restarts', happen: () => turntable().reset(), undo: () => undefined, word: 'controller' },
-  ])('is void when $what', async ({ happen, undo, word }) => {
-    await arm({ until: inHours(2) }).expect(201);
-    happen();
-    await lab.advance(10_000);
-    expect(await armOf()).toBeNull();
-    const ended = (await lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`)).body.items.find(
-      ({ kind }: { kind: string }) => kind === 'rig.arm-ended',
-    );
-    expect(ended).toMatchObject({ who: 'the run engine', data: { why: expect.stringContaining(word) } });
-    undo();
-    await lab.advance(5_000);
-  });
-
-  test('is refused while the interlock is open', async () => {
-    lab.world.controller(demoIds.rig).openInterlock();
-    await lab.advance(2_000);
-    expect((await arm({ until: inHours(2) }).expect(409)).body).toMatchObject({
-      code: 'not-ready',
-      detail: expect.stringContaining('interlock of North bench is open'),
-    });
-    lab.world.controller(demoIds.rig).closeInterlock();
-    await lab.advance(2_000);
-  });
-});
-
 describe('start checks', () => {
   const checks = async (query = `protocolId=${demoIds.shortProtocol}&revision=1`) =>
-    (await lab.as('viewer', 'GET', `${rig}/start-checks?${query}`).expect(200)).body;
+    (await lab.as('operator', 'GET', `${rig}/start-checks?${query}`).expect(200)).body;
   const stateOf = async (code: string) => (await checks()).checks.find((check: { code: string }) => check.code === code);
 
   test('say what is missing and when the run would finish', async () => {
@@ -177,6 +123,7 @@ describe('start checks', () => {
     expect(report.mayStart).toBe(false);
     expect(report.checks.filter(({ state }: { state: string }) => state === 'fail').map(({ code }: { code: string }) => code)).toEqual([
       'armed',
+      'cautions',
     ]);
     // home, then 6 x (far, near) at a beat of 2 periods of 420 s and the settling swing: 12 x 840 s and little more
     expect(report.durationS).toBeGreaterThan(12 * 840);
@@ -186,9 +133,9 @@ describe('start checks', () => {
   });
 
   test('want an arm beyond the predicted finish', async () => {
-    await arm({ until: inHours(1) }).expect(201);
+    await lab.arm(1);
     expect(await stateOf('armed')).toMatchObject({ state: 'fail', detail: expect.stringContaining('arm it for longer') });
-    await arm({ until: inHours(4) }).expect(201);
+    await lab.arm(4);
     expect((await checks()).mayStart).toBe(true);
   });
 

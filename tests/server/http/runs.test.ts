@@ -39,8 +39,11 @@ const stepsOf = async (runId: string): Promise<Step[]> => (await lab.as('viewer'
 describe('a start', () => {
   test('needs an arm until after the predicted finish', async () => {
     const protocolId = await lab.issue(quickProtocol());
+    const unsigned = await lab.askStart(protocolId).expect(409);
+    expect(unsigned.body.errors.map(({ path }: { path: string }) => path)).toEqual(['armed', 'cautions']);
+    await lab.sign();
     expect((await lab.askStart(protocolId).expect(409)).body).toMatchObject({ code: 'not-armed', errors: [{ path: 'armed' }] });
-    await lab.arm(0.02);
+    await lab.arm(0.05);
     expect((await lab.askStart(protocolId).expect(409)).body).toMatchObject({
       code: 'not-armed',
       detail: expect.stringContaining('arm it for longer'),

@@ -1,4 +1,10 @@
-/** What whoever arms a rig must have read and seen to; shown where masses are about to move. */
+/**
+ * Names the words below; whoever signed an older version has to sign again. Raise it whenever they change: a test keeps the hash of each
+ * version that was ever signed.
+ */
+export const cautionsVersion = 1;
+
+/** What whoever arms a rig or sets it in motion must have read, seen to and signed; shown where masses are about to move. */
 export const cautions: readonly { title: string; words: string }[] = [
   {
     title: 'Heavy masses',
@@ -14,3 +20,6 @@ export const cautions: readonly { title: string; words: string }[] = [
       'Stop in this application is no emergency stop. A hard-wired one (ISO 13850) is within reach at the rig and was tried. Local codes and licensed practice come first.',
   },
 ];
+
+/** The words as they are signed. */
+export const cautionsText = (): string => cautions.map(({ title, words }) => `${title}: ${words}`).join('\n');
