@@ -26,6 +26,7 @@ const screen = (name: keyof Screens): ComponentType =>
     return createElement((loaded ?? use(fetchScreens()))[name]);
   };
 
+export const CalendarScreen = screen('CalendarScreen');
 export const DataScreen = screen('DataScreen');
 export const EditorScreen = screen('EditorScreen');
 export const EvaluationScreen = screen('EvaluationScreen');

@@ -6,6 +6,7 @@ const places: readonly { href: Href; label: string; icon: IconName }[] = [
   { href: '/rigs', label: 'Rigs', icon: 'rig' },
   { href: '/protocols', label: 'Protocols', icon: 'protocols' },
   { href: '/runs', label: 'Runs', icon: 'runs' },
+  { href: '/calendar', label: 'Calendar', icon: 'calendar' },
   { href: '/lab', label: 'Lab', icon: 'lab' },
 ];
 

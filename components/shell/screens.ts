@@ -1,3 +1,4 @@
+export { CalendarScreen } from '@/components/calendar/calendar-screen';
 export { DataScreen } from '@/components/data/data-screen';
 export { ImportScreen } from '@/components/data/import-screen';
 export { EvaluationScreen } from '@/components/evaluation/evaluation-screen';

@@ -42,7 +42,7 @@ export interface FieldProps {
   onChange: (value: string) => void;
   hint?: ReactNode;
   error?: string | undefined;
-  type?: 'text' | 'email' | 'password' | 'number' | 'time' | 'datetime-local';
+  type?: 'text' | 'email' | 'password' | 'number' | 'date' | 'time' | 'datetime-local';
   /** Numbers and codes: monospaced, decimal keyboard on a phone. */
   mono?: boolean;
   lines?: number;

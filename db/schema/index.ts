@@ -5,3 +5,4 @@ export * from './protocols';
 export * from './runs';
 export * from './data';
 export * from './work';
+export * from './schedules';

@@ -4,6 +4,7 @@ import type { Express } from 'express';
 import { createApp } from '../http/create-app';
 import { allRoutes } from '../http/routes';
 import type { Services } from '../http/services';
+import { heedSchedules } from '../http/work/scheduled-starts';
 import type { Cancel } from '../interfaces/clock';
 import { startTicks } from '../scheduler/ticks';
 import { keepHouse } from '../store/housekeeping';
@@ -81,7 +82,13 @@ class Life {
     this.refreshRegularly();
     inside.crew.start();
     if (this.parts.overrides?.ticks ?? services.config.mode !== 'test')
-      this.ticks = startTicks([{ name: 'keep house', cron: '7 * * * *', work: () => keepHouse(db, services.clock.utcMs()) }], services.log);
+      this.ticks = startTicks(
+        [
+          { name: 'heed schedules', cron: '* * * * *', work: () => heedSchedules(services) },
+          { name: 'keep house', cron: '7 * * * *', work: () => keepHouse(db, services.clock.utcMs()) },
+        ],
+        services.log,
+      );
   }
 
   async stop(): Promise<void> {

@@ -3,9 +3,15 @@ import type { Transaction } from '../store/database';
 import type { Membership, SignedIn } from './route-context';
 import type { Services } from './services';
 
+interface InTheNameOf {
+  me: Pick<SignedIn, 'userId' | 'name'>;
+  membership: Membership;
+  services: Services;
+}
+
 /** Does something in one transaction together with its entry in the lab's audit chain. */
 export function audited<T>(
-  context: { me: SignedIn; membership: Membership; services: Services },
+  context: InTheNameOf,
   entry: { kind: string; data: (done: T) => Record<string, unknown> },
   act: (tx: Transaction) => Promise<T>,
 ): Promise<T> {
@@ -25,11 +31,7 @@ export function audited<T>(
 }
 
 /** Enters what a person did into the audit chain when the database can be reached; the act itself does not wait for it. */
-export function auditLater(
-  { me, membership, services }: { me: SignedIn; membership: Membership; services: Services },
-  kind: string,
-  data: Record<string, unknown>,
-): void {
+export function auditLater({ me, membership, services }: InTheNameOf, kind: string, data: Record<string, unknown>): void {
   const fact = { labId: membership.labId, who: { id: me.userId, name: me.name }, kind, data, utcMs: services.clock.utcMs() };
   services.background(
     services.database.db.transaction((tx) => appendAudit(tx, fact, services.sha256)),

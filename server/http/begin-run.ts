@@ -17,7 +17,8 @@ import type { Services } from './services';
 import { busyWords, makeStartChecks, type StartReport } from './start-checks';
 
 export interface Caller {
-  me: SignedIn;
+  /** In whose name. */
+  me: Pick<SignedIn, 'userId' | 'name'>;
   membership: Membership;
   services: Services;
 }

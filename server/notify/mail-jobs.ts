@@ -8,13 +8,16 @@ import {
   invitationMailSchema,
   mailKinds,
   resetMailSchema,
+  scheduleMailSchema,
   type ChangedMail,
   type InvitationMail,
   type ResetMail,
+  type ScheduleMail,
 } from '../store/mail-requests';
 import { createPasswordReset } from '../store/password-resets';
 import { userByEmail, userById } from '../store/people';
-import { invitationMail, passwordChangedMail, passwordResetMail } from './mails';
+import { findSchedule, startsBetween } from '../store/schedules';
+import { invitationMail, missedStartMail, passwordChangedMail, passwordResetMail, unarmedStartMail } from './mails';
 
 const resetValidMinutes = 30;
 
@@ -35,6 +38,7 @@ export function mailJobs(parts: MailJobParts): JobHandlers {
     [mailKinds.invitation]: (job) => sendInvitation(parts, invitationMailSchema.parse(job.payload)),
     [mailKinds.passwordReset]: (job) => sendPasswordReset(parts, resetMailSchema.parse(job.payload)),
     [mailKinds.passwordChanged]: (job) => sendPasswordChanged(parts, changedMailSchema.parse(job.payload)),
+    [mailKinds.schedule]: (job) => sendSchedule(parts, scheduleMailSchema.parse(job.payload)),
   };
 }
 
@@ -76,4 +80,16 @@ async function sendPasswordChanged({ db, mail }: MailJobParts, { userId, atUtcMs
   await mail.send(
     passwordChangedMail({ to: user.email, name: user.name, at: `${new Date(atUtcMs).toISOString().slice(0, 16).replace('T', ' ')} UTC` }),
   );
+}
+
+/** To whoever made the schedule; a start that was skipped or that passed meanwhile needs no warning any more. */
+async function sendSchedule({ db, clock, mail }: MailJobParts, { labId, scheduleId, dueAt, what }: ScheduleMail): Promise<void> {
+  const schedule = await findSchedule(db, labId, scheduleId);
+  const user = schedule === null ? null : await userById(db, schedule.madeById);
+  if (schedule === null || user === null) return;
+  const [row] = await startsBetween(db, labId, { scheduleIds: [scheduleId], fromUtcMs: dueAt, toUtcMs: dueAt });
+  const { rigName, protocolName, timeZone } = schedule;
+  const start = { to: user.email, name: user.name, rigName, protocolName, dueAtUtcMs: dueAt, timeZone };
+  if (what === 'missed') await mail.send(missedStartMail({ ...start, why: row?.why ?? '' }));
+  else if (row?.outcome == null && schedule.state === 'active' && clock.utcMs() < dueAt) await mail.send(unarmedStartMail(start));
 }

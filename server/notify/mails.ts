@@ -70,3 +70,40 @@ If it was not you, ask for a new password at once ("Forgotten password" on the s
 `,
   };
 }
+
+interface ScheduledStart {
+  to: string;
+  name: string;
+  rigName: string;
+  protocolName: string;
+  dueAtUtcMs: number;
+  timeZone: string;
+}
+
+export function missedStartMail({ to, name, rigName, protocolName, dueAtUtcMs, timeZone, why }: ScheduledStart & { why: string }): Mail {
+  return {
+    to,
+    subject: `Not started: ${oneLine(protocolName)} on ${oneLine(rigName)}`,
+    text: `Hello ${oneLine(name)},
+
+the run of "${oneLine(protocolName)}" that you scheduled on ${oneLine(rigName)} for ${formatDayAndClock(dueAtUtcMs, timeZone)} was not started.
+
+Why: ${oneLine(why)}
+
+Nothing has moved. A missed start is not made up for; later starts of the schedule stand.
+`,
+  };
+}
+
+export function unarmedStartMail({ to, name, rigName, protocolName, dueAtUtcMs, timeZone }: ScheduledStart): Mail {
+  return {
+    to,
+    subject: `Not armed yet: ${oneLine(rigName)}, ${oneLine(protocolName)}`,
+    text: `Hello ${oneLine(name)},
+
+the run of "${oneLine(protocolName)}" is scheduled on ${oneLine(rigName)} for ${formatDayAndClock(dueAtUtcMs, timeZone)}, but nobody has armed the rig until the end of that run.
+
+A schedule does not arm: somebody has to be at the rig, see that all is clear, and arm it before that time. If nobody does, the start is missed and nothing moves.
+`,
+  };
+}

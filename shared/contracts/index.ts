@@ -6,6 +6,7 @@ import * as protocols from './protocols';
 import * as rigs from './rigs';
 import type { RouteContract } from './route';
 import * as runs from './runs';
+import * as schedules from './schedules';
 import * as service from './service';
 import * as standing from './standing';
 
@@ -13,6 +14,15 @@ const isRoute = (value: unknown): value is RouteContract =>
   typeof value === 'object' && value !== null && 'method' in value && 'path' in value && 'access' in value;
 
 /** Every route of the API, once. */
-export const routes: readonly RouteContract[] = [service, people, rigs, standing, link, protocols, runs, data, evaluations].flatMap(
-  (module) => Object.values(module).filter(isRoute),
-);
+export const routes: readonly RouteContract[] = [
+  service,
+  people,
+  rigs,
+  standing,
+  link,
+  protocols,
+  runs,
+  schedules,
+  data,
+  evaluations,
+].flatMap((module) => Object.values(module).filter(isRoute));

@@ -21,7 +21,7 @@ export interface RouteContract {
   readonly response?: z.ZodType;
   readonly status: 200 | 201 | 202 | 204;
   /** Media type of a reply or request that is not JSON. */
-  readonly produces?: 'text/event-stream' | 'text/csv' | 'application/zip' | 'application/json';
+  readonly produces?: 'text/event-stream' | 'text/calendar' | 'text/csv' | 'application/zip' | 'application/json';
   readonly consumes?: 'text/csv';
   /** A command: needs an `Idempotency-Key` header, a repeat returns the first answer. */
   readonly idempotent?: true;

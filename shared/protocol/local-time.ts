@@ -49,3 +49,11 @@ export function waitUntilLocalTime(input: LocalTimeInput & { ifPast: 'continue' 
   if (nearest.at >= utcMs) return { endUtcMs: nearest.at, past: false };
   return { endUtcMs: ifPast === 'next day' ? occurrenceMs(input, nearest.days + 1) : utcMs, past: true };
 }
+
+/** All instants at which the clocks of a zone show a time of day on a day: one, none or two where they change. UTC ms, in order. */
+export function localInstants({ date, localTime, timeZone }: { date: string; localTime: string; timeZone: string }): number[] {
+  const local = Temporal.PlainDateTime.from(`${date}T${localTime}`);
+  const at = (disambiguation: 'earlier' | 'later') => local.toZonedDateTime(timeZone, { disambiguation });
+  const both = [at('earlier'), at('later')].filter((found) => found.toPlainDateTime().equals(local));
+  return [...new Set(both.map(({ epochMilliseconds }) => epochMilliseconds))];
+}

@@ -89,6 +89,8 @@ function places(): Place[] {
       arrives: 'evaluation-screen',
       first: (hand) => hand.taps('budget-table-toggle'),
     },
+    { name: 'calendar', path: '/calendar', arrives: 'calendar-screen', first: async (hand) => void (await hand.reads('room')) },
+    { name: 'schedule', path: '/calendar', arrives: 'calendar-screen', first: opened('schedule-a-run', 'schedule-confirm') },
     { name: 'lab', path: '/lab', arrives: 'lab-screen' },
   ];
 }

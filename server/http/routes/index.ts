@@ -8,6 +8,7 @@ import { peopleRoutes } from './people';
 import { protocolRoutes } from './protocols';
 import { rigRoutes } from './rigs';
 import { runRoutes } from './runs';
+import { scheduleRoutes } from './schedules';
 import { serviceRoutes } from './service';
 
 /** Every route of the API with the function that answers it. */
@@ -20,6 +21,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...protocolRoutes,
   ...runRoutes,
   ...liveRoutes,
+  ...scheduleRoutes,
   ...dataRoutes,
   ...evaluationRoutes,
 ];

@@ -1,0 +1,33 @@
+import { formatClock, formatDay } from '../lib/format-time';
+import type { RoomHours } from './plan';
+
+export interface Stay {
+  startUtcMs: number;
+  endUtcMs: number;
+}
+
+const dayMs = 86_400_000;
+
+/** Whether two stays share a moment. */
+export const overlap = (a: Stay, b: Stay): boolean => a.startUtcMs < b.endUtcMs && b.startUtcMs < a.endUtcMs;
+
+/** Why a stay may not be in the room, in one sentence; null where nothing stands against it. */
+export function againstRoom(hours: RoomHours, stay: Stay, timeZone: string): string | null {
+  const day = formatDay(stay.startUtcMs, timeZone);
+  const blackout = hours.blackouts.find(({ from, until }) => from <= day && day <= until);
+  if (blackout !== undefined) return `${day} is a blackout date: ${blackout.why}.`;
+  const { nightWindow } = hours;
+  if (nightWindow === null || withinWindow(nightWindow, stay, timeZone)) return null;
+  const clock = (utcMs: number) => formatClock(utcMs, { timeZone });
+  return `It would take from ${clock(stay.startUtcMs)} to ${clock(stay.endUtcMs)}; the night window of the room is ${nightWindow.from} to ${nightWindow.until}.`;
+}
+
+/** By the clocks on the wall: it starts within the window, and ends in the same night before the window does. */
+function withinWindow({ from, until }: { from: string; until: string }, { startUtcMs, endUtcMs }: Stay, timeZone: string): boolean {
+  const start = formatClock(startUtcMs, { timeZone });
+  const end = formatClock(endUtcMs, { timeZone });
+  if (endUtcMs - startUtcMs > dayMs) return false;
+  const sameDay = formatDay(startUtcMs, timeZone) === formatDay(endUtcMs, timeZone);
+  if (from < until) return sameDay && start >= from && end <= until;
+  return start >= from ? sameDay || end <= until : sameDay && end <= until;
+}
