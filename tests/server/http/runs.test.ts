@@ -259,10 +259,7 @@ describe('hold and stop', () => {
       expect(lab.station().link.controller()?.moving).toBe(true);
       await Promise.all([lab.intervene(runId, 'stop', { who: 'viewer' }).expect(202), lab.advance(5_000)]);
       expect(lab.station().link.controller()?.moving).toBe(false);
-      expect(lab.services.supervisor.driverOf(runId)?.facts()).toMatchObject({
-        state: 'stopped',
-        reason: expect.stringMatching(/The database is away since \d\d:\d\d:\d\d UTC/),
-      });
+      expect(lab.services.supervisor.driverOf(runId)?.facts().reason).toMatch(/The database is away since \d\d:\d\d:\d\d UTC/);
       Object.assign(pool, working);
       await lab.advance(10_000);
     });
