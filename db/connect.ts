@@ -38,6 +38,8 @@ export function connect({ url, maxConnections = 10, statementTimeoutMs = 10_000,
     keepAlive: true,
   });
   pool.on('error', onLost);
+  // A connection that breaks between two statements of a transaction has nobody else who listens; its next statement says so.
+  pool.on('connect', (client) => client.on('error', () => undefined));
   return {
     db: drizzle(pool, { schema }),
     pool,

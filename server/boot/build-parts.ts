@@ -1,6 +1,7 @@
 import type { Logger } from 'pino';
 import type { Clock } from '../interfaces/clock';
 import type { HeavyTasks } from '../interfaces/heavy-tasks';
+import type { RunJournals } from '../interfaces/run-journal';
 import type { MailPort } from '../interfaces/mail';
 import type { StationRig } from '../interfaces/rig-stations';
 import type { ServerConfig } from '../interfaces/server-config';
@@ -27,6 +28,8 @@ export interface BuildOverrides {
   paceMs?: number;
   /** Exit delay of a rig with a real line, ms; for tests in real time. */
   exitDelayMs?: number;
+  /** Where runs write while the database is away; default: files of the state folder. */
+  journals?: RunJournals;
   /** Whether chores run at their UTC times; they follow the machine's clock, whatever `clock` is. */
   ticks?: boolean;
 }

@@ -1,9 +1,12 @@
 import { randomUUID } from 'node:crypto';
+import { hostname } from 'node:os';
+import { join } from 'node:path';
 import type { Logger } from 'pino';
 import type { Arming } from '../engine/arming';
 import { endOfArm, knownAfter } from '../engine/end-of-arm';
 import { GuidedMoves } from '../engine/guided-moves';
 import { RigSupervisor } from '../engine/rig-supervisor';
+import { DATABASE_GRACE_MS } from '../engine/run-saver';
 import { sha256Hex } from '../evaluation/sha256';
 import type { RigStation } from '../interfaces/rig-stations';
 import type { SampleStore } from '../interfaces/sample-store';
@@ -13,12 +16,25 @@ import type { MemoryArmKeeper } from './arm-keeper';
 import type { Background } from './background';
 import type { BuildParts } from './build-parts';
 import { buildStanding, engineItself } from './build-standing';
-import { LeaseKeeper } from './lease-keeper';
+import { FileJournals } from './file-journal';
+import { LeaseKeeper, type RigKey } from './lease-keeper';
 import type { MemoryLockKeeper } from './lock-keeper';
 import { RigApparatus } from './rig-apparatus';
 import { ServerRigStations } from './rig-stations';
 
 const shortestLeaseMs = 3_000;
+const serverName = `process ${String(process.pid)} of ${hostname()}`;
+
+export interface RigSideWiring {
+  log: Logger;
+  background: Background;
+  samples: SampleStore;
+  onLine(rigId: string): void;
+  /** A rig that another process drove is this one's now. */
+  onTaken(rig: RigKey): void;
+  /** The database does not answer since then; null: it does again. */
+  onDatabase(sinceUtcMs: number | null): void;
+}
 
 export interface RigSide {
   arms: MemoryArmKeeper;
@@ -32,10 +48,7 @@ export interface RigSide {
 }
 
 /** All that has to do with the rigs: who may move them, their lines, and the engine that drives runs. */
-export function buildRigSide(
-  parts: BuildParts,
-  { log, background, samples, onLine }: { log: Logger; background: Background; samples: SampleStore; onLine(rigId: string): void },
-): RigSide {
+export function buildRigSide(parts: BuildParts, { log, background, samples, onLine, onTaken, onDatabase }: RigSideWiring): RigSide {
   const { engineDatabase: database = parts.database, clock, overrides = {} } = parts;
   const { arms, arming, locks } = buildStanding(parts, {
     ...{ log, background, onLine },
@@ -49,7 +62,13 @@ export function buildRigSide(
     log,
     holder: randomUUID(),
     leaseMs: Math.max(shortestLeaseMs, overrides.paceMs ?? 0),
+    graceMs: DATABASE_GRACE_MS,
+    onTaken,
     onLost: letGo,
+    onDatabase: (sinceUtcMs) => {
+      supervisor.noteDatabase(sinceUtcMs);
+      onDatabase(sinceUtcMs);
+    },
   });
   const apparatus = new RigApparatus(parts, log);
   const stations = new ServerRigStations({
@@ -59,11 +78,11 @@ export function buildRigSide(
     apparatusOf: (rig) => apparatus.of(rig),
     onLinkEvent: (station, event) => heed(station, event),
   });
+  const linkOf = (rigId: string) => stations.get(rigId)?.link ?? null;
   const supervisor: RigSupervisor = new RigSupervisor({
     store: createRunStore(database.db),
-    clock,
-    sha256: sha256Hex,
-    linkOf: (rigId) => stations.get(rigId)?.link ?? null,
+    journals: overrides.journals ?? new FileJournals(join(parts.config.stateDir, 'journal')),
+    ...{ clock, sha256: sha256Hex, serverName, linkOf },
     armOf: (rigId) => arms.armOf(rigId),
     whyDisarmed: (rigId) => arms.endedOf(rigId)?.why ?? '',
     lockedBy: (rigId) => locks.lockedBy(rigId),
@@ -75,8 +94,7 @@ export function buildRigSide(
   });
 
   const guided: GuidedMoves = new GuidedMoves({
-    clock,
-    linkOf: (rigId) => stations.get(rigId)?.link ?? null,
+    ...{ clock, linkOf },
     armOf: (rigId) => arms.armOf(rigId),
     takenBy: (rigId) => supervisor.takenBy(rigId),
     lockedBy: (rigId) => locks.lockedBy(rigId),
@@ -86,11 +104,10 @@ export function buildRigSide(
   const heed = heedLinks({ arms, arming, guided, log });
 
   /** Two drivers on one rig would be worse than none. */
-  function letGo(): void {
-    log.fatal('another server has taken a rig over; this one lets go of all of them');
-    supervisor.close();
-    guided.closeAll();
-    background.add(stations.close(), 'closing the lines');
+  function letGo({ rigId }: RigKey): void {
+    supervisor.letGo(rigId);
+    guided.letGo(rigId);
+    background.add(stations.closeOne(rigId), 'closing a line');
   }
 
   return { arms, arming, locks, leases, stations, supervisor, guided, apparatus };

@@ -9,7 +9,6 @@ import type { Cancel } from '../interfaces/clock';
 import { startTicks } from '../scheduler/ticks';
 import { keepHouse } from '../store/housekeeping';
 import { allRigs } from '../store/rigs';
-import { unfinishedRuns } from '../store/runs-read';
 import type { BuildParts } from './build-parts';
 import { buildServices, type Inside } from './build-services';
 
@@ -61,23 +60,8 @@ class Life {
     const { services, inside } = this;
     const { db } = services.database;
     await keepHouse(db, services.clock.utcMs());
-    for (const rig of await allRigs(db)) {
-      if (!(await inside.leases.take({ labId: rig.labId, rigId: rig.id }))) return;
-      await inside.arms.load({ labId: rig.labId, rigId: rig.id });
-      await inside.locks.load({ labId: rig.labId, rigId: rig.id });
-      await inside.stations.put(rig);
-    }
+    await inside.takeRigs(await allRigs(db));
     inside.leases.renewRegularly();
-    for (const run of await unfinishedRuns(db)) {
-      services.activeRuns.add(run);
-      services.stations.loadMasses(run.rigId, run.start.rig);
-    }
-    await services.access.refresh(services.watchedLabs());
-    const { quarantined } = await services.supervisor.recover();
-    for (const { start, why } of quarantined) {
-      services.activeRuns.remove(start.runId);
-      services.log.error({ runId: start.runId, rigId: start.rigId }, why);
-    }
     inside.tellTakenUp();
     this.refreshRegularly();
     inside.crew.start();
@@ -126,7 +110,7 @@ const refreshMs = 60_000;
 async function idle(services: Services, inside: Inside): Promise<void> {
   await services.breathe();
   await services.supervisor.idle();
-  await Promise.all([inside.stations.idle(), inside.crew.idle(), inside.background.idle()]);
+  await Promise.all([inside.stations.idle(), inside.crew.idle(), inside.background.idle(), inside.leases.idle()]);
   await services.supervisor.idle();
 }
 

@@ -12,6 +12,7 @@ import type { Services } from '../http/services';
 import { workEvaluation } from '../http/work/evaluation-job';
 import { rehearsalJobKind, workRehearsal } from '../http/work/rehearsal-job';
 import type { MailPort } from '../interfaces/mail';
+import type { StationRig } from '../interfaces/rig-stations';
 import type { ServerConfig } from '../interfaces/server-config';
 import { mailJobs } from '../notify/mail-jobs';
 import { evaluationJobKind } from '../store/evaluations';
@@ -23,12 +24,15 @@ import { Background } from './background';
 import type { BuildParts } from './build-parts';
 import { buildRigSide, type RigSide } from './build-rigs';
 import { JobCrew } from './job-crew';
+import { RigTaking } from './take-rigs';
 import { createWorkerTasks } from './worker-tasks';
 
 /** What begins and ends with the server and no route needs. */
 export interface Inside extends Omit<RigSide, 'supervisor' | 'guided'> {
   crew: JobCrew;
   background: Background;
+  /** Drives these rigs, as far as nobody else does. */
+  takeRigs(rigs: readonly StationRig[]): Promise<void>;
   /** Unfinished runs are driven from now on. */
   tellTakenUp(): void;
   closeTasks(): Promise<void>;
@@ -43,12 +47,15 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   const { database, clock, config, overrides = {} } = parts;
   const log = overrides.log ?? createLog(config);
   const background = new Background(log);
+  let awaySinceUtcMs: number | null = null;
   const nowUtcMs = () => clock.utcMs();
   const samples = createSampleStore(database);
   const sessions = createSessions({ db: database.db, clock, newToken, sha256: sha256Hex });
   const { arms, arming, locks, leases, stations, supervisor, guided, apparatus } = buildRigSide(parts, {
     ...{ log, background, samples },
     onLine: (rigId) => lines.changed(rigId),
+    onTaken: (rig) => background.add(taking.takenOver(rig), 'taking a rig over'),
+    onDatabase: (sinceUtcMs) => (awaySinceUtcMs = sinceUtcMs),
   });
   const live = new LiveHub({ source: liveSourceOf(() => services), clock, streamsPerUser: config.limits.streamsPerUser });
   const lines = new LineHub({
@@ -72,10 +79,12 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     tasks: overrides.tasks ?? (workers as NonNullable<typeof workers>),
     background: (work, what) => background.add(work, what),
     takenUp: takenUp.promise,
+    databaseAwaySinceUtcMs: () => awaySinceUtcMs,
     breathe: () => new Promise((resolve) => setImmediate(resolve)),
     pokeJobs: () => crew.poke(),
   };
   const crew = buildCrew(parts, services);
+  const taking = new RigTaking(services, { leases, arms, locks, stations });
   access.onEnded((ended) => {
     live.endAccess(ended);
     lines.endAccess(ended);
@@ -86,14 +95,8 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   return {
     services,
     inside: {
-      leases,
-      arms,
-      arming,
-      locks,
-      stations,
-      apparatus,
-      crew,
-      background,
+      ...{ leases, arms, arming, locks, stations, apparatus, crew, background },
+      takeRigs: (rigs) => taking.takeAll(rigs),
       tellTakenUp: takenUp.resolve,
       closeTasks: async () => workers?.close(),
     },

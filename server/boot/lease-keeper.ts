@@ -1,7 +1,12 @@
 import type { Logger } from 'pino';
 import type { Cancel, Clock } from '../interfaces/clock';
 import type { Connection } from '../store/database';
-import { giveRigLease, takeRigLease } from '../store/rig-leases';
+import { freeRigs, giveRigLeases, renewRigLeases, takeRigLease } from '../store/rig-leases';
+
+export interface RigKey {
+  labId: string;
+  rigId: string;
+}
 
 export interface LeaseParts {
   database: Connection;
@@ -11,84 +16,149 @@ export interface LeaseParts {
   holder: string;
   /** A crashed server's rigs are free again after this, ms. */
   leaseMs: number;
+  /** A rig for which this process waited is its own now. */
+  onTaken(rig: RigKey): void;
   /** Another process has taken a rig over: this one must let go of it at once. */
   onLost(rig: RigKey): void;
-}
-
-interface RigKey {
-  labId: string;
-  rigId: string;
+  /** Whether leases can be renewed: after the grace the database counts as away, since `sinceUtcMs`; null: it answers again. */
+  onDatabase(sinceUtcMs: number | null): void;
+  /** How long a renewal may go unanswered, ms. */
+  graceMs: number;
 }
 
 /** So often within its length a lease is renewed. */
 const renewals = 3;
 const retryMs = 250;
 
-/** Leases of the rigs that this process drives: no rig has two drivers. */
+/**
+ * Leases of the rigs that this process drives: no rig has two drivers. It waits for those that another process has, each by itself, and
+ * takes them over when their lease has run out.
+ */
 export class LeaseKeeper {
   private readonly epochs = new Map<string, RigKey & { epoch: number }>();
-  private cancel: Cancel = () => undefined;
+  private readonly waitedFor = new Map<string, RigKey>();
+  private readonly cancels: Partial<Record<'renew' | 'retry' | 'grace', Cancel>> = {};
   private closed = false;
-  private renewing: Promise<void> = Promise.resolve();
+  private away = false;
+  private working: Promise<unknown> = Promise.resolve();
 
   constructor(private readonly parts: LeaseParts) {}
 
   /** The epoch under which this process drives a rig, taken now where nobody has it; null while another process drives it. */
   async epochOf(rig: RigKey): Promise<number | null> {
-    const held = this.epochs.get(rig.rigId);
-    if (held === undefined && !this.closed) await this.tryTake(rig);
+    if (!this.epochs.has(rig.rigId) && !this.closed && !(await this.tryTake(rig))) this.waitFor(rig);
     return this.epochs.get(rig.rigId)?.epoch ?? null;
   }
 
-  /** Takes the lease of a rig, waiting until the one of a process that is gone has run out. False when closed before. */
-  async take(rig: RigKey): Promise<boolean> {
-    for (let told = false; !this.closed; told = true) {
-      if (await this.tryTake(rig)) return true;
-      if (!told) this.parts.log.warn(rig, 'another server holds the lease of the rig; waiting for its end');
-      await new Promise<void>((resolve) => void this.parts.clock.after(retryMs, resolve));
-    }
-    return false;
+  /** Whether this process drives the rig. */
+  holds(rigId: string): boolean {
+    return this.epochs.has(rigId);
   }
 
   renewRegularly(): void {
-    this.cancel = this.parts.clock.after(this.parts.leaseMs / renewals, () => {
-      this.renewing = this.renewAll().then(() => {
-        if (!this.closed) this.renewRegularly();
-      });
+    if (this.closed) return;
+    this.cancels.renew = this.parts.clock.after(this.parts.leaseMs / renewals, () => {
+      this.working = this.renew().then(() => this.renewRegularly());
     });
+  }
+
+  /** Resolves when no renewal is under way. */
+  async idle(): Promise<void> {
+    await this.working;
   }
 
   /** Gives all leases back, so that the next process need not wait. */
   async close(): Promise<void> {
     this.closed = true;
-    this.cancel();
+    for (const cancel of Object.values(this.cancels)) cancel();
     // A renewal that is still on its way would take again what is given back here.
-    await this.renewing;
+    await this.working;
     const { database, clock, holder } = this.parts;
-    for (const { labId, rigId } of this.epochs.values())
-      await giveRigLease(database.db, { labId, rigId, holder, nowUtcMs: clock.utcMs() }).catch(() => undefined);
     this.epochs.clear();
+    await giveRigLeases(database.db, { holder, nowUtcMs: clock.utcMs() }).catch(() => undefined);
   }
 
   private async tryTake(rig: RigKey): Promise<boolean> {
     const { database, clock, holder, leaseMs } = this.parts;
+    const { labId, rigId } = rig;
     const nowUtcMs = clock.utcMs();
-    const epoch = await takeRigLease(database.db, { ...rig, holder, nowUtcMs, untilUtcMs: nowUtcMs + leaseMs });
-    if (epoch === null) return false;
-    this.epochs.set(rig.rigId, { ...rig, epoch });
+    const epoch = await takeRigLease(database.db, { labId, rigId, holder, nowUtcMs, untilUtcMs: nowUtcMs + leaseMs });
+    if (epoch === null || this.closed) return false;
+    this.epochs.set(rigId, { labId, rigId, epoch });
     return true;
   }
 
-  /** A database that does not answer takes no lease away: nobody else can get it there either. */
-  private async renewAll(): Promise<void> {
-    for (const { labId, rigId } of [...this.epochs.values()]) {
-      try {
-        if ((await this.tryTake({ labId, rigId })) || this.closed) continue;
-        this.epochs.delete(rigId);
-        this.parts.onLost({ labId, rigId });
-      } catch (error) {
-        this.parts.log.warn({ err: error, rigId }, 'the lease of a rig could not be renewed');
+  private waitFor({ labId, rigId }: RigKey): void {
+    this.parts.log.warn({ rigId }, 'another server drives the rig; this one takes it over when its lease has run out');
+    this.waitedFor.set(rigId, { labId, rigId });
+    this.retryRegularly();
+  }
+
+  private retryRegularly(): void {
+    if (this.closed || this.waitedFor.size === 0 || this.cancels.retry !== undefined) return;
+    this.cancels.retry = this.parts.clock.after(retryMs, () => {
+      void this.retry().finally(() => {
+        delete this.cancels.retry;
+        this.retryRegularly();
+      });
+    });
+  }
+
+  private async retry(): Promise<void> {
+    const { database, clock, log } = this.parts;
+    try {
+      const free = await freeRigs(database.db, [...this.waitedFor.keys()], clock.utcMs());
+      for (const rig of [...this.waitedFor.values()]) {
+        if (!free.has(rig.rigId) || !(await this.tryTake(rig))) continue;
+        this.waitedFor.delete(rig.rigId);
+        log.warn(
+          { rigId: rig.rigId, epoch: this.epochs.get(rig.rigId)?.epoch },
+          'the lease of the other server has run out; this one takes the rig over',
+        );
+        this.parts.onTaken(rig);
       }
+    } catch (error) {
+      log.debug({ err: error }, 'the leases of rigs could not be looked at');
     }
+  }
+
+  /** A database that does not answer takes no lease away: nobody else can get it there either. */
+  private async renew(): Promise<void> {
+    const { database, clock, log, holder, leaseMs } = this.parts;
+    if (this.epochs.size === 0) return;
+    const held = [...this.epochs.values()];
+    this.expectAnswer();
+    try {
+      const renewed = await renewRigLeases(database.db, { holder, untilUtcMs: clock.utcMs() + leaseMs });
+      this.answered();
+      for (const { labId, rigId } of held) if (!renewed.has(rigId)) this.lose({ labId, rigId });
+    } catch (error) {
+      log.warn({ err: error }, 'the leases of the rigs could not be renewed');
+    }
+  }
+
+  private lose(rig: RigKey): void {
+    if (this.closed || !this.epochs.delete(rig.rigId)) return;
+    this.parts.log.fatal({ rigId: rig.rigId }, 'another server has taken the rig over; this one lets go of it');
+    this.parts.onLost(rig);
+    this.waitFor(rig);
+  }
+
+  private expectAnswer(): void {
+    if (this.cancels.grace !== undefined) return;
+    const { clock, graceMs, onDatabase } = this.parts;
+    const sinceUtcMs = clock.utcMs();
+    this.cancels.grace = clock.after(graceMs, () => {
+      this.away = true;
+      onDatabase(sinceUtcMs);
+    });
+  }
+
+  private answered(): void {
+    this.cancels.grace?.();
+    delete this.cancels.grace;
+    if (!this.away) return;
+    this.away = false;
+    this.parts.onDatabase(null);
   }
 }

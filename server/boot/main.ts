@@ -11,6 +11,7 @@ import { buildServer } from './build-server';
 import { ConfigError, readConfig } from './config';
 import { queueDemoRehearsal } from './demo-rehearsal';
 import { RealClock } from './real-clock';
+import { startWatchdog } from './watchdog';
 
 /** The server as a process: configuration, database, demo lab, one line on stdout once it listens, and a clean end. */
 
@@ -55,6 +56,9 @@ async function main(): Promise<void> {
   };
   process.on('SIGINT', end);
   process.on('SIGTERM', end);
+
+  // Where a debugger stands still, a loop does too.
+  if (config.mode === 'production') startWatchdog();
 
   const address = await server.listen();
   process.stdout.write(`${JSON.stringify(greeting(config, address, mailbox))}\n`);

@@ -12,7 +12,7 @@ import { geometryOf } from '@/shared/physics/torque';
 import { checkProtocol } from '@/shared/protocol/check';
 import { planTimeline } from '@/shared/protocol/timeline';
 import type { RigDocument } from '@/shared/rig/document';
-import { faultKinds, faultKindsNotYet, isFaultKind } from '../engine/rehearsal/rehearsal-faults';
+import { faultKinds, isFaultKind } from '../engine/rehearsal/rehearsal-faults';
 import { type Rehearsal, rehearse } from '../engine/rehearsal/rehearse';
 import { writeArchiveFolder } from '../evaluation/archive-files';
 import { sha256Hex } from '../evaluation/sha256';
@@ -102,10 +102,7 @@ function instant(text: string): number {
 function faultOf(text: string): SimulatedRun['faults'][number] {
   const [, kind = '', seconds = ''] = /^([a-z-]+)@(\d+(?:\.\d+)?)$/.exec(text) ?? [];
   if (isFaultKind(kind)) return { kind, atS: Number(seconds) };
-  if (faultKindsNotYet.includes(kind)) throw new NotYetError(`--fault ${kind} is not built yet. Built are: ${faultKinds.join(', ')}.`);
-  throw new Unusable(
-    `--fault ${text}: KIND@SECONDS is needed, for example link-drop@600; the kinds are ${[...faultKinds, ...faultKindsNotYet].join(', ')}.`,
-  );
+  throw new Unusable(`--fault ${text}: KIND@SECONDS is needed, for example link-drop@600; the kinds are ${faultKinds.join(', ')}.`);
 }
 
 function emptyFolder(folder: string | undefined): string {

@@ -56,7 +56,7 @@ export class ServerRigStations implements RigStations {
     const { motion } = rig.document;
     const epoch = await this.parts.epochOf({ labId: rig.labId, rigId: rig.id });
     if (motion === undefined || epoch === null) {
-      log.warn({ rigId: rig.id }, motion === undefined ? 'the rig has no motion data and is not driven' : 'another server drives the rig');
+      if (motion === undefined) log.warn({ rigId: rig.id }, 'the rig has no motion data and is not driven');
       return;
     }
     const outside = factoryOf(rig.link, clock);
@@ -118,7 +118,7 @@ export class ServerRigStations implements RigStations {
     await Promise.all([...this.stations.keys()].map((rigId) => this.closeOne(rigId)));
   }
 
-  private async closeOne(rigId: string): Promise<void> {
+  async closeOne(rigId: string): Promise<void> {
     const station = this.stations.get(rigId);
     this.stations.delete(rigId);
     station?.end();

@@ -22,6 +22,7 @@ export function newContext(start: RunStart, nowUtcMs: number): RunContext {
     position: nothingKnown,
     linkUp: false,
     linkDownSinceUtcMs: null,
+    databaseAwaySinceUtcMs: null,
     uPlanS: 0,
     step: null,
     ahead: null,

@@ -6,6 +6,8 @@ import {
   beginHold,
   beginStop,
   type GraveCause,
+  noteDatabaseAway,
+  noteDatabaseBack,
   noteGrave,
   noteInterruption,
   requestHold,
@@ -206,6 +208,13 @@ export const underWay = {
   'link.refused-controller': interruptedBy(noteStranger),
   'server-restarted': interruptedBy(),
   'database-away': interruptedBy(),
+  'database-back': { actions: act(noteDatabaseBack) },
+};
+
+/** At rest already: what is written down of the database decides nothing but whether a resume is possible. */
+const databaseNoted = {
+  'database-away': { actions: act(noteDatabaseAway) },
+  'database-back': { actions: act(noteDatabaseBack) },
 };
 
 /** How the motion of the present step may end. */
@@ -234,6 +243,7 @@ export const comingToRest = {
   ],
   'link.motion-ended': [{ guard: isMine, actions: act(noteEnded) }],
   'link.homed': [{ guard: isMine, actions: act(noteEnded) }],
+  ...databaseNoted,
   'link.lost': { actions: act(noteLost) },
   'link.refused-controller': { actions: act(noteStranger) },
   'link.interlock': { actions: act(noteInterlock) },

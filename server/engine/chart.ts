@@ -11,6 +11,7 @@ import {
   beginHold,
   beginStop,
   carryOn,
+  noteDatabaseBack,
   noteRefusedResume,
   noteRestart,
   requestHold,
@@ -152,8 +153,11 @@ const machine = chart.createMachine({
         ...pick(comingToRest, 'link.motion-began', 'link.motion-ended', 'link.homed', 'link.refused-controller'),
         'link.ready': [...returns, { actions: act(noteReady, awaitReturn) }],
         'link.standstill': [
-          // Told on a line that is only just coming back: what counts is the standstill after it is ready.
-          { guard: ({ context }) => !context.run.linkUp, actions: act(noteStandstill) },
+          // Told on a line that is only just coming back, or while the database is away: what counts is the standstill after that.
+          {
+            guard: ({ context: { run } }) => !run.linkUp || run.databaseAwaySinceUtcMs !== null,
+            actions: act(noteStandstill),
+          },
           {
             guard: when((draft) => returnRefusal(draft) === null, noteStandstill, takeAheadUnseen),
             target: 'choosing',
@@ -161,6 +165,7 @@ const machine = chart.createMachine({
           },
           { target: 'holding', actions: act(noteStandstill, explainNoReturn, beginHold) },
         ],
+        'database-back': { actions: act(noteDatabaseBack, awaitReturn) },
         deadline: { target: 'holding', actions: act(explainNoReturn, beginHold) },
       },
     },
@@ -187,7 +192,7 @@ const machine = chart.createMachine({
         ],
         stop: { target: 'stopping', actions: act(requestStop) },
         'link.motion-began': { actions: act(noteStrangeMotion, (draft) => void draft.command((id) => ({ kind: 'hold', id }))) },
-        ...pick(comingToRest, 'link.lost', 'link.refused-controller', 'link.interlock', 'link.supply'),
+        ...pick(comingToRest, 'link.lost', 'link.refused-controller', 'link.interlock', 'link.supply', 'database-away', 'database-back'),
         'link.ready': [{ guard: bootedAnew, actions: act(noteReset, noteReady) }, { actions: act(noteReady) }],
         'link.reset': { actions: act(noteReset) },
         'server-restarted': { actions: act(noteRestart) },

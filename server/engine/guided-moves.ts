@@ -263,6 +263,12 @@ export class GuidedMoves {
     if (session?.id === sessionId) this.close(session);
   }
 
+  /** Another process drives the rig now. */
+  letGo(rigId: string): void {
+    const session = this.sessions.get(rigId);
+    if (session !== undefined) this.close(session);
+  }
+
   closeAll(): void {
     for (const session of [...this.sessions.values()]) this.close(session);
   }

@@ -24,14 +24,18 @@ const interruptions: Record<InterruptionCause, string> = {
   'link-lost': 'The link to the controller was lost.',
   'server-restarted': 'The server restarted.',
   'lease-lapsed': 'The controller had no renewal of the motion lease for 2 s and ended the motion.',
-  'database-away': 'The database was away for more than 4 s.',
+  'database-away': 'The database did not answer for more than 4 s.',
 };
+
+const iso = (utcMs: number) => new Date(utcMs).toISOString();
 
 /** Ends all motion; the chart waits in `holding` for the controller's word. */
 export function beginHold(draft: Draft): void {
-  const acted = draft.event.type === 'hold' ? draft.event.acted : null;
-  halt(draft, acted ?? draft.command((id) => ({ kind: 'hold', id })));
+  halt(draft, actedHold(draft) ?? draft.command((id) => ({ kind: 'hold', id })));
 }
+
+/** Id of the hold that went to the controller before anything was decided; null where none did. */
+const actedHold = ({ event }: Draft): string | null => (event.type === 'hold' || event.type === 'database-away' ? event.acted : null);
 
 export function beginStop(draft: Draft): void {
   const acted = draft.event.type === 'stop' ? draft.event.acted : null;
@@ -83,17 +87,34 @@ export function noteInterruption(draft: Draft): void {
   const sinceUtcMs =
     event.type === 'server-restarted' ? event.aliveUtcMs : event.type === 'database-away' ? event.sinceUtcMs : draft.stamp.utcMs;
   noteRestart(draft);
-  if (event.type === 'database-away') draft.log('database-away', { gapS: (draft.nowUtcMs - sinceUtcMs) / 1000 });
+  noteDatabaseAway(draft);
   const before = context.interruption;
   context.interruption = { cause, sinceUtcMs: Math.min(before?.sinceUtcMs ?? sinceUtcMs, sinceUtcMs) };
   draft.because(cause, event.type === 'link.refused-controller' ? event.link.why : interruptions[cause]);
 }
 
-/** A process that has just started knows nothing of the line yet. */
+/** Nothing is set in motion before it is back. */
+export function noteDatabaseAway(draft: Draft): void {
+  const { event, context } = draft;
+  if (event.type !== 'database-away') return;
+  context.databaseAwaySinceUtcMs = event.sinceUtcMs;
+  draft.log('database-away', { since: iso(event.sinceUtcMs) });
+}
+
+export function noteDatabaseBack(draft: Draft): void {
+  const { context } = draft;
+  const sinceUtcMs = context.databaseAwaySinceUtcMs;
+  context.databaseAwaySinceUtcMs = null;
+  if (sinceUtcMs !== null) draft.log('database-back', { gapS: (draft.nowUtcMs - sinceUtcMs) / 1000 });
+}
+
+/** A process that has just started knows nothing of the line yet, and has found the database. */
 export function noteRestart(draft: Draft): void {
   const { event, context } = draft;
   if (event.type !== 'server-restarted') return;
-  draft.log('server-restarted', { gapS: (draft.nowUtcMs - event.aliveUtcMs) / 1000 });
+  noteDatabaseBack(draft);
+  const by = event.serverName == null ? {} : { takenUpBy: event.serverName };
+  draft.log('server-restarted', { gapS: (draft.nowUtcMs - event.aliveUtcMs) / 1000, ...by });
   context.linkUp = false;
   context.linkDownSinceUtcMs ??= event.aliveUtcMs;
 }
@@ -107,7 +128,7 @@ function causeOf(event: RunEvent): InterruptionCause | null {
 /** Under `resume`: waits for the line, then for standstill; a hold makes both sure and cancels what may still wait. */
 export function awaitReturn(draft: Draft): void {
   const { context } = draft;
-  if (context.linkUp) draft.command((id) => ({ kind: 'hold', id }));
+  if (context.linkUp && actedHold(draft) === null) draft.command((id) => ({ kind: 'hold', id }));
   context.deadlineUtcMs = (context.interruption?.sinceUtcMs ?? draft.nowUtcMs) + GAP_LIMIT_MS;
 }
 
@@ -125,6 +146,7 @@ type ArmGiven = { name: string; untilUtcMs: number } | 'simulated' | null;
 function motionRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string | null {
   const { context } = draft;
   const known = context.controller;
+  if (context.databaseAwaySinceUtcMs !== null) return 'The database is away; wait until it answers.';
   if (!context.linkUp || known === null) return 'The link to the controller is down; wait until it is ready.';
   if (!known.interlockClosed) return 'The interlock is open; close it first.';
   if (!known.supplyPresent) return 'The motor supply is off; switch it on at the rig.';
@@ -148,8 +170,6 @@ function armRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string
   if (arm.untilUtcMs > endUtcMs) return null;
   return `The arm of ${arm.name} ends at ${iso(arm.untilUtcMs)}, before the predicted finish at ${iso(endUtcMs)}. Arm the rig until after that.`;
 }
-
-const iso = (utcMs: number) => new Date(utcMs).toISOString();
 
 /** The protocol lets the interrupted run go on: what was standing goes on standing, a broken move is finished first. */
 export function carryOn(draft: Draft): void {

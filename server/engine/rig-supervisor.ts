@@ -3,15 +3,20 @@ import type { RunStart } from '@/shared/archive/run-records';
 import type { Finding } from '@/shared/protocol/finding';
 import { planTimeline } from '@/shared/protocol/timeline';
 import type { Clock } from '../interfaces/clock';
-import type { RunStore, StoredRun } from '../interfaces/run-store';
+import type { RunJournals } from '../interfaces/run-journal';
+import { type RunStore, StaleRunError, type StoredRun } from '../interfaces/run-store';
 import type { TurntableLink } from '../interfaces/turntable-link';
+import { isRunOver } from './chart';
 import { checkAtStart } from './check-at-start';
+import { mergeWrites, withAllToPerform } from './merge-journal';
 import { type Arm, CHART_VERSION, type Effect } from './run-context';
-import { RunDriver, type RunChange } from './run-driver';
+import { RunDriver } from './run-driver';
+import type { RunChange } from './run-driver-parts';
 import { restored } from './stored-snapshot';
 
 export interface SupervisorParts {
   store: RunStore;
+  journals: RunJournals;
   clock: Clock;
   sha256: Sha256;
   /** The open link of a rig; null while it has none. The same object for as long as a run may use it. */
@@ -23,6 +28,8 @@ export interface SupervisorParts {
   lockedBy(rigId: string): string | null;
   /** In a sentence, who moves the rig by hand; null while nobody does. */
   guidedBy(rigId: string): string | null;
+  /** Of this process, for the log of runs that it takes up. */
+  serverName?: string;
   /** Notifications and the end of the arm. */
   perform(effect: Exclude<Effect, { kind: 'link' }>, start: RunStart): void;
   /** An error that is nobody's answer, to be logged. */
@@ -48,6 +55,11 @@ export interface QuarantinedRun {
   why: string;
 }
 
+const hasEnded = ({ snapshot, chartVersion }: StoredRun) => {
+  const found = restored(snapshot, chartVersion);
+  return found !== null && isRunOver(found);
+};
+
 export type SupervisorListener = (driver: RunDriver, change: RunChange) => void;
 
 /** Owns the drivers: one run to a rig, unfinished ones taken up at boot. */
@@ -59,17 +71,23 @@ export class RigSupervisor {
   constructor(private readonly parts: SupervisorParts) {}
 
   /**
-   * Takes up every unfinished run: it is resumed, held or stopped as its protocol says. Call it once, when the links are being opened.
+   * Takes up the unfinished runs of the rigs that this process drives, with what an earlier one kept of them in its journal: each is
+   * resumed, held or stopped as its protocol says. Call it when their links are being opened.
    */
-  async recover(): Promise<{ taken: RunDriver[]; quarantined: QuarantinedRun[] }> {
+  async recover(isOurs: (rigId: string) => boolean = () => true): Promise<{ taken: RunDriver[]; quarantined: QuarantinedRun[] }> {
     const taken: RunDriver[] = [];
-    for (const stored of await this.parts.store.unfinished()) {
-      const why = this.unfitness(stored);
-      if (why !== null) this.quarantine.set(stored.start.rigId, { start: stored.start, why });
-      else taken.push(this.drive(stored.start, stored, this.parts.linkOf(stored.start.rigId) as TurntableLink));
+    const quarantined: QuarantinedRun[] = [];
+    for (const found of await this.parts.store.unfinished()) {
+      const { start } = found;
+      if (!isOurs(start.rigId) || this.byRig.has(start.rigId)) continue;
+      const { stored, why: unread } = await this.withJournal(found);
+      const why = unread ?? this.unfitness(stored);
+      if (why !== null) quarantined.push({ start, why });
+      else if (!hasEnded(stored)) taken.push(this.drive(start, stored, this.parts.linkOf(start.rigId) as TurntableLink));
     }
+    for (const run of quarantined) this.quarantine.set(run.start.rigId, run);
     for (const driver of taken) driver.recover();
-    return { taken, quarantined: [...this.quarantine.values()] };
+    return { taken, quarantined };
   }
 
   /**
@@ -157,10 +175,43 @@ export class RigSupervisor {
     await Promise.all([...this.byRig.values()].map((driver) => driver.idle()));
   }
 
+  /** The database does not answer since `sinceUtcMs`, or answers again (null): all runs are told. */
+  noteDatabase(sinceUtcMs: number | null): void {
+    for (const driver of this.byRig.values()) {
+      if (sinceUtcMs === null) driver.noteDatabaseBack();
+      else driver.noteDatabaseAway(sinceUtcMs);
+    }
+  }
+
+  /** Lets go of the run of a rig that another process drives now. */
+  letGo(rigId: string): void {
+    this.byRig.get(rigId)?.close();
+    this.byRig.delete(rigId);
+    this.quarantine.delete(rigId);
+  }
+
   /** Lets go of all runs without touching them; the next process takes them up. */
   close(): void {
     for (const driver of this.byRig.values()) driver.close();
     this.byRig.clear();
+  }
+
+  /** The run with what a process that is gone could not bring into the database; `why` where that cannot be read. */
+  private async withJournal(stored: StoredRun): Promise<{ stored: StoredRun; why: string | null }> {
+    const { store, journals, onError } = this.parts;
+    const { start } = stored;
+    const journal = journals.of(start);
+    try {
+      const writes = await journal.read();
+      if (writes.length === 0) return { stored, why: null };
+      await mergeWrites(store, withAllToPerform(writes));
+      await journal.clear();
+    } catch (error) {
+      if (!(error instanceof StaleRunError)) return { stored, why: error instanceof Error ? error.message : String(error) };
+      const aside = await journal.setAside();
+      onError?.(new Error(`${error.message}; what this server had kept of it meanwhile lies in ${aside}`), start);
+    }
+    return { stored: (await store.load(start.labId, start.runId)) ?? stored, why: null };
   }
 
   private unfitness({ start, chartVersion, snapshot }: StoredRun): string | null {
@@ -171,11 +222,13 @@ export class RigSupervisor {
   }
 
   private drive(start: RunStart, stored: StoredRun | null, link: TurntableLink): RunDriver {
-    const { store, clock, sha256, armOf, whyDisarmed, lockedBy, perform, onError } = this.parts;
+    const { store, journals, clock, sha256, armOf, whyDisarmed, lockedBy, perform, onError, serverName } = this.parts;
     const driver = new RunDriver({
+      ...(serverName === undefined ? {} : { serverName }),
       start,
       stored,
       store,
+      journal: journals.of(start),
       clock,
       sha256,
       link,
@@ -188,7 +241,7 @@ export class RigSupervisor {
     this.byRig.set(start.rigId, driver);
     driver.onChange((change) => {
       for (const listener of this.listeners) listener(driver, change);
-      if (driver.isOver() && this.byRig.get(start.rigId) === driver) this.byRig.delete(start.rigId);
+      if (driver.isDone() && this.byRig.get(start.rigId) === driver) this.byRig.delete(start.rigId);
     });
     return driver;
   }

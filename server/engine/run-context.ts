@@ -13,7 +13,7 @@ import type { Instant } from '../interfaces/clock';
  * Raised whenever the shape or meaning of the stored context changes; `stored-snapshot.ts` brings older ones up to it, and versions that
  * it does not know are quarantined.
  */
-export const CHART_VERSION = 2;
+export const CHART_VERSION = 3;
 
 export type ChartState =
   | 'starting'
@@ -134,6 +134,8 @@ export interface RunContext {
   linkUp: boolean;
   /** Since when the link is down; null while it is up. */
   linkDownSinceUtcMs: number | null;
+  /** Since when the database is away, as far as it counts (longer than its grace); null while it answers. */
+  databaseAwaySinceUtcMs: number | null;
   /** Standard uncertainty of instants taken from the plan, s: that of the last controller stamp. */
   uPlanS: number;
   step: ActiveStep | null;
@@ -184,10 +186,12 @@ export type RunEvent =
   | Told<'resume', { by: string; arm: Arm | null }>
   /** The arm of the rig was ended before its time, by a person or by what happened at the rig. */
   | Told<'arm-ended', { why: string }>
-  | Told<'server-restarted', { aliveUtcMs: number }>
-  | Told<'database-away', { sinceUtcMs: number }>
-  /** A motion that was saved but, because a hold or stop overtook it, never sent. */
-  | Told<'not-sent', { commandId: string }>;
+  /** Another process, or the same anew, has taken the run up. */
+  | Told<'server-restarted', { aliveUtcMs: number; serverName?: string | null }>
+  /** `acted`: id of a hold that already went to the controller; null where nothing could move. */
+  | Told<'database-away', { sinceUtcMs: number; acted: string | null }>
+  /** It answers again, and holds all that was kept elsewhere meanwhile. */
+  | Told<'database-back'>;
 
 export type RunEventType = RunEvent['type'];
 export type RunEventOf<T extends RunEventType> = Extract<RunEvent, { type: T }>;

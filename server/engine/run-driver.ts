@@ -1,46 +1,17 @@
-import { type ChainHead, emptyChain, type Sha256 } from '@/shared/archive/chain';
-import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
-import type { Clock, Instant } from '../interfaces/clock';
-import { type RunStore, StaleRunError, type StoredRun } from '../interfaces/run-store';
-import type { LinkEvent, TurntableLink } from '../interfaces/turntable-link';
+import { type ChainHead, emptyChain } from '@/shared/archive/chain';
+import type { ChainedEvent, StepRow } from '@/shared/archive/run-records';
+import type { Instant } from '../interfaces/clock';
+import { StaleRunError } from '../interfaces/run-store';
+import type { LinkEvent } from '../interfaces/turntable-link';
 import { chained } from './chained';
 import { beginRun, deadlineOf, isArmExpected, isRunOver, isUnderWay, wantsMotion } from './chart';
-import { type Advance, type Arm, CHART_VERSION, type Effect, type RunEvent, type RunSnapshot } from './run-context';
+import { type Advance, CHART_VERSION, type Effect, type RunEvent, type RunSnapshot } from './run-context';
 import { advanceSafely } from './advance-safely';
-import { createPredictor, factsOf, mayResume, plannedDwells, type RunFacts, summaryOf } from './run-facts';
+import { createPredictor, factsOf, mayResume, plannedDwells, type RunFacts, summaryOf, withDatabase } from './run-facts';
+import type { Answer, RunChange, RunDriverParts } from './run-driver-parts';
 import { DATABASE_GRACE_MS, RunSaver } from './run-saver';
 import { ALIVE_MS, RunTimers } from './run-timers';
 import { isOwn, type OwnEffect, snapshotIn, type StoredSnapshot } from './stored-snapshot';
-
-export interface RunDriverParts {
-  start: RunStart;
-  /** What the store holds of a run that is taken up again; null for a new one. */
-  stored: StoredRun | null;
-  store: RunStore;
-  /** Opened and kept by its owner; the driver listens and sends. */
-  link: TurntableLink;
-  clock: Clock;
-  sha256: Sha256;
-  /** The arm of the rig now; null when nobody answers for it. */
-  armNow(): Arm | null;
-  /** Why nobody answers for it any more; a rehearsal has nobody, nor anybody's hands in it. */
-  whyDisarmed?(): string;
-  /** In a sentence, whose personal locks are on the rig; null while there are none. */
-  lockedBy?(): string | null;
-  /** Notifications and the end of the arm, performed after they were saved. */
-  perform(effect: OwnEffect): void;
-  /** An error that is nobody's answer: of a listener, of `perform`, or one that made the driver let go of the run. */
-  onError?(error: unknown): void;
-}
-
-/** What one saved transition changed. */
-export interface RunChange {
-  facts: RunFacts;
-  steps: StepRow[];
-  events: ChainedEvent[];
-}
-
-export type Answer = { ok: true; serverAtUtcMs: number } | { ok: false; why: string };
 
 type Item = { event: RunEvent; done?: (result: Advance | null) => void } | 'beat' | 'alive';
 
@@ -82,7 +53,13 @@ export class RunDriver {
     this.chain = stored?.chain ?? emptyChain;
     this.savedMs = clock.monotonicMs();
     this.predict = createPredictor(start);
-    this.saver = new RunSaver({ store, clock, onAway: (sinceUtcMs) => this.databaseIsAway(sinceUtcMs) });
+    this.saver = new RunSaver({
+      ...{ store, clock, journal: parts.journal },
+      onAway: (sinceUtcMs) => this.databaseIsAway(sinceUtcMs),
+      onBack: () => this.databaseIsBack(),
+      onStale: () => this.takenOver(),
+      onError: (error) => parts.onError?.(error),
+    });
     this.timers = new RunTimers(clock, {
       deadline: (utcMs) => this.enqueue({ event: { type: 'deadline', at: { utcMs, uS: SERVER_U_S } } }),
       beat: () => this.enqueue('beat'),
@@ -102,10 +79,10 @@ export class RunDriver {
 
   /** Takes up a run that another process left unfinished. */
   recover(): void {
-    const { link, stored, clock } = this.parts;
+    const { link, stored, clock, serverName = null } = this.parts;
     const { aliveUtcMs = clock.utcMs(), toPerform = [] } = (stored?.snapshot ?? {}) as Partial<StoredSnapshot>;
     for (const effect of toPerform) this.outside(() => this.parts.perform(effect));
-    this.enqueue({ event: { type: 'server-restarted', at: this.now(), aliveUtcMs } });
+    this.enqueue({ event: { type: 'server-restarted', at: this.now(), aliveUtcMs, serverName } });
     const controller = link.health().condition === 'ready' ? link.controller() : null;
     if (controller !== null) this.heard({ kind: 'ready', at: this.now(), controller, sameBoot: true });
     this.timers.keepAlive();
@@ -136,6 +113,8 @@ export class RunDriver {
   /** Answers when it is saved: it starts motion, so nothing goes to the controller before. */
   async resume(by: string): Promise<Answer> {
     const now = this.now();
+    if (this.mayNotWrite())
+      return { ok: false, why: 'The database does not answer at the moment; nothing is set in motion before it does.' };
     const standing = this.parts.armNow();
     const arm = standing === null ? null : { name: standing.name, untilUtcMs: standing.untilUtcMs };
     const allowed = mayResume(this.parts.start, this.snapshot, { utcMs: now.utcMs, arm, lockedBy: this.lockedBy() });
@@ -161,9 +140,21 @@ export class RunDriver {
       predictedEndUtcMs: this.predict(this.snapshot, nowUtcMs),
       dwellsPlanned: this.dwellsPlanned,
     });
-    return this.databaseAwaySinceUtcMs === null
-      ? facts
-      : { ...facts, reason: 'The database is away; motion has been brought to rest, and the log is kept here until it is back.' };
+    return withDatabase(facts, this.databaseAwaySinceUtcMs);
+  }
+
+  /** The database does not answer, as the keeper of the rig lease noticed: also a run that has nothing to write is interrupted. */
+  noteDatabaseAway(sinceUtcMs: number): void {
+    if (!this.closed && !this.isOver()) this.saver.noteAway(sinceUtcMs);
+  }
+
+  noteDatabaseBack(): void {
+    if (!this.closed) this.saver.noteBack();
+  }
+
+  /** Whether the run is over and all of it is in the database. */
+  isDone(): boolean {
+    return this.stale || (isRunOver(this.snapshot) && !this.saver.journalling);
   }
 
   /** Where the run stands, as last saved. */
@@ -207,11 +198,14 @@ export class RunDriver {
     const id = `${this.runId}-${kind}-${Math.round(at.utcMs)}-${this.acted}`;
     this.halting += 1;
     const releaseDrivers = this.parts.start.rig.motion?.safeWhenFree === true;
-    // What the link tells while it sends comes after the hold, and is taken up after it.
-    this.inbox.push({ event: { type: kind, at, by, acted: id } });
-    this.parts.link.send(kind === 'hold' ? { kind, id } : { kind, id, releaseDrivers });
+    const kept = new Promise((done) => {
+      // What the link tells while it sends comes after the hold, and is taken up after it.
+      this.inbox.push({ event: { type: kind, at, by, acted: id }, done });
+      this.parts.link.send(kind === 'hold' ? { kind, id } : { kind, id, releaseDrivers });
+    });
+    this.saver.hurryUp();
     this.kick();
-    return { ok: true, serverAtUtcMs: at.utcMs };
+    return { ok: true, serverAtUtcMs: at.utcMs, kept };
   }
 
   private heard(link: LinkEvent): void {
@@ -268,13 +262,13 @@ export class RunDriver {
 
   private async saveThenAct(result: Advance, halted: boolean): Promise<void> {
     const events = chained(result.events, this.chain, this.parts.sha256);
-    const saved = await this.save(result.snapshot, { steps: result.steps, events, toPerform: result.effects.filter(isOwn) });
+    const hurried = this.halting > 0;
+    const saved = await this.save(result.snapshot, { steps: result.steps, events, toPerform: result.effects.filter(isOwn), hurried });
     if (halted) this.halting -= 1;
     if (!saved) return;
     this.snapshot = result.snapshot;
     this.chain = events.at(-1) ?? this.chain;
     for (const effect of result.effects) this.performEffect(effect);
-    this.reportOutage();
     this.armTimers();
     this.tell({ facts: this.facts(), steps: result.steps, events });
     if (isRunOver(this.snapshot)) this.finish();
@@ -282,29 +276,28 @@ export class RunDriver {
 
   private async save(
     snapshot: RunSnapshot,
-    { toPerform, ...changed }: { steps: StepRow[]; events: ChainedEvent[]; toPerform: OwnEffect[] },
+    { toPerform, hurried, ...changed }: { steps: StepRow[]; events: ChainedEvent[]; toPerform: OwnEffect[]; hurried: boolean },
   ): Promise<boolean> {
     const { start, clock } = this.parts;
     const stored: StoredSnapshot = { ...snapshot, aliveUtcMs: clock.utcMs(), toPerform };
     const summary = summaryOf(snapshot, this.predict(snapshot, clock.utcMs()));
     try {
-      const saved = await this.saver.save({
-        labId: start.labId,
-        runId: start.runId,
-        expectedSeq: this.chain.seq,
-        snapshot: stored,
-        chartVersion: CHART_VERSION,
-        ...changed,
-        summary,
-      });
+      const { labId, runId } = start;
+      const write = { labId, runId, expectedSeq: this.chain.seq, snapshot: stored, chartVersion: CHART_VERSION, ...changed, summary };
+      const saved = await this.saver.save(write, { hurried });
       this.savedMs = clock.monotonicMs();
       return saved && !this.closed;
     } catch (error) {
       if (!(error instanceof StaleRunError)) throw error;
-      this.stale = true;
-      this.close();
+      this.takenOver();
       return false;
     }
+  }
+
+  /** Another process has driven the run on: not a word more to the controller. */
+  private takenOver(): void {
+    this.stale = true;
+    this.close();
   }
 
   private performEffect(effect: Effect): void {
@@ -318,7 +311,11 @@ export class RunDriver {
 
   /** A hold or stop is under way, the database is away, hands are in the rig, or it is armed no more: nothing is set in motion. */
   private mayNotMove(): boolean {
-    return this.halting > 0 || this.databaseAwaySinceUtcMs !== null || this.lockedBy() !== null || this.isDisarmed();
+    return this.halting > 0 || this.mayNotWrite() || this.lockedBy() !== null || this.isDisarmed();
+  }
+
+  private mayNotWrite(): boolean {
+    return this.databaseAwaySinceUtcMs !== null || this.saver.journalling;
   }
 
   private lockedBy(): string | null {
@@ -335,13 +332,25 @@ export class RunDriver {
     this.inbox.push({ event: { type: 'arm-ended', at: this.now(), why: this.parts.whyDisarmed?.() ?? '' } });
   }
 
-  /** The write goes on being tried; meanwhile nothing may move. */
+  /** Motion ends at once; what the protocol makes of it is decided before all that waits. */
   private databaseIsAway(sinceUtcMs: number): void {
     if (this.closed) return;
     this.databaseAwaySinceUtcMs = sinceUtcMs;
-    if (!wantsMotion(this.snapshot)) return;
-    this.acted += 1;
-    this.parts.link.send({ kind: 'hold', id: `${this.runId}-away-${Math.round(sinceUtcMs)}-${this.acted}` });
+    if (isRunOver(this.snapshot)) return;
+    let acted: string | null = null;
+    if (wantsMotion(this.snapshot)) {
+      this.acted += 1;
+      acted = `${this.runId}-away-${Math.round(sinceUtcMs)}-${this.acted}`;
+      this.parts.link.send({ kind: 'hold', id: acted });
+    }
+    this.inbox.unshift({ event: { type: 'database-away', at: this.now(), sinceUtcMs, acted } });
+    this.kick();
+  }
+
+  private databaseIsBack(): void {
+    this.databaseAwaySinceUtcMs = null;
+    if (isRunOver(this.snapshot)) return this.tell({ facts: this.facts(), steps: [], events: [] });
+    this.enqueue({ event: { type: 'database-back', at: this.now() } });
   }
 
   /** Granted only while the loop turns, in a state that wants motion; a short outage of the database is bridged. */
@@ -365,15 +374,8 @@ export class RunDriver {
 
   /** So that a restart knows how long nobody drove the run. */
   private async saveAlive(): Promise<void> {
-    if (this.isOver() || this.parts.clock.monotonicMs() - this.savedMs < ALIVE_MS / 2) return;
-    await this.save(this.snapshot, { steps: [], events: [], toPerform: [] });
-    this.reportOutage();
-  }
-
-  private reportOutage(): void {
-    const sinceUtcMs = this.databaseAwaySinceUtcMs;
-    this.databaseAwaySinceUtcMs = null;
-    if (sinceUtcMs !== null) this.inbox.unshift({ event: { type: 'database-away', at: this.now(), sinceUtcMs } });
+    if (this.isOver() || this.mayNotWrite() || this.parts.clock.monotonicMs() - this.savedMs < ALIVE_MS / 2) return;
+    await this.save(this.snapshot, { steps: [], events: [], toPerform: [], hurried: false });
   }
 
   private finish(): void {

@@ -121,6 +121,14 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, pre
   };
 }
 
+/** What screens show while the database is away: the run itself cannot know yet for how long. */
+export function withDatabase(facts: RunFacts, awaySinceUtcMs: number | null): RunFacts {
+  if (awaySinceUtcMs === null) return facts;
+  const since = new Date(awaySinceUtcMs).toISOString().slice(11, 19);
+  const away = `The database is away since ${since} UTC; motion has been brought to rest, and the log is kept here until it is back.`;
+  return { ...facts, reason: `${facts.reason} ${away}`.trim() };
+}
+
 /** Dwells of the plan as it stood at the start. */
 export function plannedDwells(start: RunStart, fromUtcMs: number): number {
   return planTimeline(start, { utcMs: fromUtcMs, angleDeg: start.rig.motion?.homeDeg ?? 0 }).dwells;

@@ -15,14 +15,21 @@ export interface StoredSnapshot extends RunSnapshot {
 
 export const isOwn = (effect: Effect): effect is OwnEffect => effect.kind !== 'link';
 
-/** Contexts of version 1 tell nothing of passes of the home edge: the count is unproved until the next one. */
-type OldContext = Omit<RunContext, 'position'> & { position?: KnownPosition };
+/**
+ * Contexts of version 1 tell nothing of passes of the home edge: the count is unproved until the next one. Those of version 2 were never
+ * written while the database was away.
+ */
+type OldContext = Omit<RunContext, 'position' | 'databaseAwaySinceUtcMs'> & {
+  position?: KnownPosition;
+  databaseAwaySinceUtcMs?: number | null;
+};
 
 /** A snapshot of this or an older version in the shape of this one; null where this version cannot read it. */
 export function restored(snapshot: unknown, chartVersion: number): RunSnapshot | null {
   if (snapshot === null || chartVersion < 1 || chartVersion > CHART_VERSION) return null;
   const { state, context } = snapshot as Omit<RunSnapshot, 'context'> & { context: OldContext };
-  return { version: CHART_VERSION, state, context: { ...context, position: context.position ?? nothingKnown } };
+  const { position = nothingKnown, databaseAwaySinceUtcMs = null } = context;
+  return { version: CHART_VERSION, state, context: { ...context, position, databaseAwaySinceUtcMs } };
 }
 
 /** @throws Error when the store holds a snapshot of another version: the supervisor quarantines such runs before. */

@@ -1,6 +1,7 @@
 import type { RunStart } from '@/shared/archive/run-records';
 import type { RunView } from '@/shared/contracts/runs';
-import type { RunChange, RunDriver } from '../engine/run-driver';
+import type { RunDriver } from '../engine/run-driver';
+import type { RunChange } from '../engine/run-driver-parts';
 import type { RigSupervisor } from '../engine/rig-supervisor';
 import type { RunListRow } from '../store/runs-read';
 import type { LiveHub } from './live/live-hub';
@@ -48,6 +49,6 @@ export class ActiveRuns {
     const run = this.byId.get(driver.runId);
     if (run === undefined) return;
     this.parts.live.changed(run.id, { events: change.events, steps: change.steps, view: runViewOf(run, change.facts) });
-    if (driver.isOver()) this.byId.delete(run.id);
+    if (driver.isDone()) this.byId.delete(run.id);
   }
 }

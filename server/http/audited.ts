@@ -1,4 +1,4 @@
-import { appendAudit } from '../store/audit';
+import { appendAudit, type AuditFact } from '../store/audit';
 import type { Transaction } from '../store/database';
 import type { Membership, SignedIn } from './route-context';
 import type { Services } from './services';
@@ -33,8 +33,21 @@ export function audited<T>(
 /** Enters what a person did into the audit chain when the database can be reached; the act itself does not wait for it. */
 export function auditLater({ me, membership, services }: InTheNameOf, kind: string, data: Record<string, unknown>): void {
   const fact = { labId: membership.labId, who: { id: me.userId, name: me.name }, kind, data, utcMs: services.clock.utcMs() };
-  services.background(
-    services.database.db.transaction((tx) => appendAudit(tx, fact, services.sha256)),
-    'an entry of the audit chain',
-  );
+  services.background(entered(services, fact), 'an entry of the audit chain');
+}
+
+const retryMs = 5_000;
+/** An hour: the log of the run tells of it as well. */
+const mostTries = 720;
+
+async function entered({ database, clock, sha256 }: Services, fact: AuditFact): Promise<void> {
+  for (let tries = 1; ; tries += 1) {
+    try {
+      await database.db.transaction((tx) => appendAudit(tx, fact, sha256));
+      return;
+    } catch (error) {
+      if (tries === mostTries) throw error;
+      await new Promise<void>((resolve) => void clock.after(retryMs, resolve));
+    }
+  }
 }

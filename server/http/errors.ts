@@ -71,8 +71,10 @@ const saysAway = (error: ErrorLike) =>
 
 const isFileError = (error: ErrorLike) => error.code === 'ENOENT' && error.syscall !== 'connect';
 
+const awaySince = (utcMs: number | null) => (utcMs === null ? 'at the moment' : `since ${new Date(utcMs).toISOString().slice(11, 19)} UTC`);
+
 /** Every failure as a problem; what nobody foresaw becomes `internal` and tells nothing of the inside. */
-export function problemErrorOf(error: unknown): ProblemError {
+export function problemErrorOf(error: unknown, databaseAwaySinceUtcMs: number | null = null): ProblemError {
   if (error instanceof ProblemError) return error;
   if (error instanceof NotYetError) return new ProblemError('not-yet', error.message);
   if (isErrorLike(error)) {
@@ -86,7 +88,7 @@ export function problemErrorOf(error: unknown): ProblemError {
     if (isSomewhere(error, saysAway))
       return new ProblemError(
         'database-away',
-        'The database does not answer at the moment. Nothing was changed; hold and stop still work. Try again in a few seconds.',
+        `The database does not answer ${awaySince(databaseAwaySinceUtcMs)}. Nothing was changed; hold and stop still work. Try again in a few seconds.`,
       );
     if (error.status === 400) return new ProblemError('invalid-input', 'The address or the body of the request could not be read.');
     if (error.status === 404) return new ProblemError('not-found', 'There is nothing at this address.');

@@ -51,6 +51,8 @@ export interface Services {
   background(work: Promise<unknown>, what: string): void;
   /** Resolves when this server has taken up the runs that another left unfinished. */
   takenUp: Promise<void>;
+  /** Since when the database does not answer, as far as the keeper of the rig leases has noticed; null while it does. */
+  databaseAwaySinceUtcMs(): number | null;
   /** Lets everything else have a turn: long work calls it between its parts, so that hold and stop never wait for it. */
   breathe(): Promise<void>;
   /** Tells the workers that a job was queued, so that it need not wait for their next look. */

@@ -1,4 +1,4 @@
-import { and, eq, lte, or, sql } from 'drizzle-orm';
+import { and, eq, inArray, lte, or, sql } from 'drizzle-orm';
 import { rigLeases } from '@/db/schema';
 import type { Handle } from './database';
 
@@ -25,10 +25,26 @@ export async function takeRigLease(
   return rows[0]?.epoch ?? null;
 }
 
-/** Lets a lease go at once, so that another process need not wait for its end. */
-export async function giveRigLease(db: Handle, lease: { labId: string; rigId: string; holder: string; nowUtcMs: number }): Promise<void> {
-  await db
+/** Renews all leases of a holder at once. Returns the rigs that are still its own. */
+export async function renewRigLeases(db: Handle, lease: { holder: string; untilUtcMs: number }): Promise<ReadonlySet<string>> {
+  const rows = await db
     .update(rigLeases)
-    .set({ untilAt: lease.nowUtcMs })
-    .where(and(eq(rigLeases.labId, lease.labId), eq(rigLeases.rigId, lease.rigId), eq(rigLeases.holder, lease.holder)));
+    .set({ untilAt: lease.untilUtcMs })
+    .where(eq(rigLeases.holder, lease.holder))
+    .returning({ rigId: rigLeases.rigId });
+  return new Set(rows.map(({ rigId }) => rigId));
+}
+
+/** Those of these rigs whose lease has run out. */
+export async function freeRigs(db: Handle, rigIds: readonly string[], nowUtcMs: number): Promise<ReadonlySet<string>> {
+  const rows = await db
+    .select({ rigId: rigLeases.rigId })
+    .from(rigLeases)
+    .where(and(inArray(rigLeases.rigId, [...rigIds]), lte(rigLeases.untilAt, nowUtcMs)));
+  return new Set(rows.map(({ rigId }) => rigId));
+}
+
+/** Lets all leases of a holder go at once, so that another process need not wait for their end. */
+export async function giveRigLeases(db: Handle, lease: { holder: string; nowUtcMs: number }): Promise<void> {
+  await db.update(rigLeases).set({ untilAt: lease.nowUtcMs }).where(eq(rigLeases.holder, lease.holder));
 }

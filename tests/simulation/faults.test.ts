@@ -3,7 +3,7 @@ import { verifyChain } from '@/shared/archive/chain';
 import type { InterruptionPolicy } from '@/shared/protocol/document';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import type { Rehearsal } from '@/server/engine/rehearsal/rehearse';
-import { runThrough, shortProtocol } from './rehearsing';
+import { runThrough, shortProtocol, startUtcMs } from './rehearsing';
 
 /** The table of faults of the protocol format: what a run comes to, at whatever second the fault comes. */
 const table = {
@@ -12,6 +12,8 @@ const table = {
   'server-kill': { hold: 'held', resume: 'finished', stop: 'stopped' },
   'controller-reset': { hold: 'held', resume: 'held', stop: 'stopped' },
   'interlock-open': { hold: 'held', resume: 'held', stop: 'stopped' },
+  'sensor-gap': { hold: 'finished', resume: 'finished', stop: 'finished' },
+  burst: { hold: 'finished', resume: 'finished', stop: 'finished' },
 } as const;
 type Fault = keyof typeof table;
 
@@ -60,6 +62,32 @@ test('under resume a swing that the fault broke is finished first, its row says 
     expect(dwell).toMatchObject({ kind: 'dwell', outcome: 'done', startUtcMs: steps[late]?.endUtcMs });
     expect((dwell?.endUtcMs ?? 0) - (dwell?.startUtcMs ?? 0)).toBeCloseTo(40_000, 6);
   }
+});
+
+test('a gap of the sensor leaves no sample for 120 s, a burst shakes them by up to 200 µrad for 60 s, and neither touches the rest', async () => {
+  const samplesOf = async (kind: 'sensor-gap' | 'burst') => {
+    const { channels } = await runThrough(shortProtocol, { faults: [{ kind, atS: 60 }] });
+    return channels[0] as Rehearsal['channels'][0];
+  };
+  const [calm, gap, burst] = [
+    (await whole).channels[0] as Rehearsal['channels'][0],
+    await samplesOf('sensor-gap'),
+    await samplesOf('burst'),
+  ];
+  const since = (utcMs: number) => (utcMs - startUtcMs) / 1000;
+  const truth = new Map([...calm.utcMs].map((utcMs, index) => [utcMs, calm.value[index] as number]));
+  expect([...calm.utcMs].filter((utcMs) => !gap.utcMs.includes(utcMs)).map((utcMs) => Math.floor(since(utcMs)))).toEqual(
+    Array.from({ length: 120 }, (_, index) => 60 + index),
+  );
+  expect([...gap.utcMs].every((utcMs, index) => gap.value[index] === truth.get(utcMs))).toBe(true);
+  const off = [...burst.utcMs].map((utcMs, index) => ({
+    atS: since(utcMs),
+    rad: (burst.value[index] as number) - (truth.get(utcMs) ?? 0),
+  }));
+  expect(off.filter(({ atS, rad }) => rad !== 0 && (atS < 60 || atS >= 120))).toEqual([]);
+  const greatest = Math.max(...off.map(({ rad }) => Math.abs(rad)));
+  expect(greatest).toBeGreaterThan(150e-6);
+  expect(greatest).toBeLessThanOrEqual(200e-6);
 });
 
 test('the log says for how long nobody drove the run', async () => {

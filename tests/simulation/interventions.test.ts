@@ -4,6 +4,7 @@ import type { InterruptionPolicy } from '@/shared/protocol/document';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { rehearsalParts } from '@/server/boot/rehearsal-parts';
 import { RehearsalStore } from '@/server/engine/rehearsal/rehearsal-store';
+import { MemoryJournal } from '@/server/engine/memory-journal';
 import { RunDriver } from '@/server/engine/run-driver';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import { sha256Hex } from '@/server/evaluation/sha256';
@@ -26,6 +27,7 @@ async function makeNight(onInterruption: InterruptionPolicy) {
     start,
     stored: null,
     store,
+    journal: new MemoryJournal(),
     link,
     clock,
     sha256: sha256Hex,

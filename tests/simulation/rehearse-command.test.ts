@@ -209,7 +209,6 @@ describe('unusable input ends with 2, a sentence, and no folder', () => {
     ['a G that is none', [short(), '--true-g', 'big'], '--true-g big'],
     ['a start without a zone', [short(), '--start', '2000-01-01T00:00:00'], '--start'],
     ['a drawn geometry', [short(), '--draw-geometry'], 'not built yet'],
-    ['a fault that is not built', [short(), '--fault', 'burst@10'], 'not built yet'],
     ['an unknown fault', [short(), '--fault', 'earthquake@10'], 'KIND@SECONDS'],
     ['a fault without its second', [short(), '--fault', 'garbage'], 'KIND@SECONDS'],
     ['an unknown option', [short(), '--speed', '3'], 'speed'],

@@ -3,6 +3,7 @@ import type { RigMotion } from '@/shared/rig/document';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { rehearsalParts } from '@/server/boot/rehearsal-parts';
 import { RehearsalStore } from '@/server/engine/rehearsal/rehearsal-store';
+import { MemoryJournal } from '@/server/engine/memory-journal';
 import type { Arm } from '@/server/engine/run-context';
 import { RunDriver } from '@/server/engine/run-driver';
 import { VirtualClock } from '@/server/engine/virtual-clock';
@@ -50,6 +51,7 @@ async function makeNight({
       start,
       stored,
       store,
+      journal: new MemoryJournal(),
       link,
       clock,
       sha256: sha256Hex,

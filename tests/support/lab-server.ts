@@ -5,6 +5,7 @@ import { demoIds, demoPeople, seedDemo } from '@/db/demo/seed';
 import { heavyTasks } from '@/server/boot/heavy-tasks';
 import type { BuildOverrides } from '@/server/boot/build-parts';
 import { buildServer, type BuiltServer } from '@/server/boot/build-server';
+import { MemoryJournals } from '@/server/engine/memory-journal';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import type { RigStation, StationRig } from '@/server/interfaces/rig-stations';
 import type { ServerConfig } from '@/server/interfaces/server-config';
@@ -57,6 +58,7 @@ export class World {
   private databaseAway = false;
   private readonly controllers = new Map<string, SimulatedController>();
   readonly clock: VirtualClock;
+  readonly journals = new MemoryJournals();
 
   constructor(startUtcMs: number = eveningUtcMs) {
     this.clock = new VirtualClock(startUtcMs, () => this.settle());
@@ -118,7 +120,14 @@ export class LabServer {
       database: database.connection,
       clock: world.clock,
       config: testConfig(database, options.config),
-      overrides: { tasks: heavyTasks, controllerOf: world.controllerOf, ticks: false, paceMs: 30_000, ...options.overrides },
+      overrides: {
+        tasks: heavyTasks,
+        controllerOf: world.controllerOf,
+        journals: world.journals,
+        ticks: false,
+        paceMs: 30_000,
+        ...options.overrides,
+      },
     });
     world.drivenBy(built);
     const server = new LabServer(built, world, database);

@@ -2,11 +2,13 @@ import type { ChainedEvent, ChannelSeries, RunStart, SimulatedRun, StepRow } fro
 import { createSimulatedBalance } from '@/shared/physics/simulated-balance';
 import { motionOf } from '@/shared/protocol/durations';
 import type { TurntableLink } from '../../interfaces/turntable-link';
+import { MemoryJournal } from '../memory-journal';
 import { RunDriver } from '../run-driver';
 import type { RunFacts } from '../run-facts';
 import { VirtualClock } from '../virtual-clock';
 import { DeflectionSeries } from './deflection';
 import { scheduleFaults, SERVER_AWAY_MS } from './rehearsal-faults';
+import { ReadoutFaults } from './readout-faults';
 import type { RehearsalParts } from './rehearsal-parts';
 import { RehearsalStore } from './rehearsal-store';
 
@@ -55,13 +57,14 @@ export async function rehearse({ start, startUtcMs }: RehearsalInput, parts: Reh
 
   const deflection = new DeflectionSeries();
   const balance = createSimulatedBalance({ rig, bigG: simulated.trueG, seed: simulated.seed, rateHz: simulated.rateHz, startUtcMs });
-  const sample = () => deflection.append(balance.advance({ toUtcMs: clock.utcMs(), angleDegAt: controller.trueAngleDegAt }));
+  const readout = new ReadoutFaults();
+  const sample = () => deflection.append(readout.spoil(balance.advance({ toUtcMs: clock.utcMs(), angleDegAt: controller.trueAngleDegAt })));
   const sampleOn = () => {
     sample();
     clock.after(SAMPLE_BATCH_MS, sampleOn);
   };
   clock.after(SAMPLE_BATCH_MS, sampleOn);
-  scheduleFaults(simulated.faults, { clock, controller, killServer: () => server.kill() });
+  scheduleFaults(simulated.faults, { clock, controller, readout, killServer: () => server.kill() });
   server.begin();
   await clock.advance(LONGEST_MS, () => server.hasEnded());
   sample();
@@ -97,6 +100,7 @@ interface ServerParts extends RehearsalParts {
 /** The process that drives the run: it can be killed, and another takes the run up from what was saved. */
 class RehearsalServer {
   readonly store: RehearsalStore;
+  private readonly journal = new MemoryJournal();
   private link: TurntableLink;
   private present: RunDriver | null = null;
   private epoch = 1;
@@ -162,6 +166,7 @@ class RehearsalServer {
       start: this.start,
       stored,
       store: this.store,
+      journal: this.journal,
       link: this.link,
       clock,
       sha256,

@@ -1,7 +1,9 @@
 import type { Response } from 'express';
 import * as contracts from '@/shared/contracts/runs';
 import { stepsCsv } from '@/shared/archive/step-csv';
-import type { Answer, RunDriver } from '@/server/engine/run-driver';
+import type { RunDriver } from '@/server/engine/run-driver';
+import type { Answer } from '@/server/engine/run-driver-parts';
+import type { Clock } from '@/server/interfaces/clock';
 import { findProtocol, findRevision } from '@/server/store/protocols';
 import { findMassSet, findRig } from '@/server/store/rigs';
 import * as store from '@/server/store/runs-read';
@@ -85,13 +87,13 @@ const startRoutes = [
 
 const longestWaitMs = 20_000;
 
-/** Waits until a server that has just started drives the runs it found; at most 20 s. */
-async function waitTakenUp({ takenUp, clock }: Services): Promise<void> {
+/** Waits for something, but no longer than this. */
+async function atMost(longestMs: number, awaited: Promise<unknown>, clock: Clock): Promise<void> {
   let cancel = () => undefined as void;
   const longest = new Promise<void>((resolve) => {
-    cancel = clock.after(longestWaitMs, resolve);
+    cancel = clock.after(longestMs, resolve);
   });
-  await Promise.race([takenUp, longest]);
+  await Promise.race([awaited, longest]);
   cancel();
 }
 
@@ -106,7 +108,8 @@ async function driverOf(services: Services, labId: string, runId: string): Promi
       'not-possible-now',
       `The run is over: it ${run.state === 'failed' ? 'failed' : run.state === 'stopped' ? 'was stopped' : 'has finished'}.`,
     );
-  await waitTakenUp(services);
+  // A server that has just started may still be taking up the runs it found.
+  await atMost(longestWaitMs, services.takenUp, services.clock);
   const later = services.activeRuns.find(labId, runId);
   if (later !== null) return later.driver;
   const why =
@@ -115,8 +118,12 @@ async function driverOf(services: Services, labId: string, runId: string): Promi
   throw new ProblemError('not-possible-now', `${why} Use the switch at the rig if anything moves.`);
 }
 
-function accepted(runId: string, answer: Answer): { runId: string; serverAt: string } {
+const longestKeepingMs = 1_000;
+
+/** The controller has it already; the answer waits until it is safe on a disk, so that nothing that was answered can be forgotten. */
+async function accepted({ clock }: Services, runId: string, answer: Answer): Promise<{ runId: string; serverAt: string }> {
   if (!answer.ok) throw new ProblemError('not-possible-now', answer.why);
+  if (answer.kept !== undefined) await atMost(longestKeepingMs, answer.kept, clock);
   return { runId, serverAt: isoOf(answer.serverAtUtcMs) };
 }
 
@@ -125,14 +132,14 @@ const interventionRoutes = [
     const { params, me, membership, services } = context;
     const answer = (await driverOf(services, membership.labId, params.runId)).hold(me.name);
     auditLater(context, 'run.hold-asked', { runId: params.runId });
-    return accepted(params.runId, answer);
+    return accepted(services, params.runId, answer);
   }),
 
   mount(contracts.holdAfterDwell, async (context) => {
     const { params, me, membership, services } = context;
     const answer = (await driverOf(services, membership.labId, params.runId)).holdAfterDwell(me.name);
     auditLater(context, 'run.hold-after-dwell-asked', { runId: params.runId });
-    return accepted(params.runId, answer);
+    return accepted(services, params.runId, answer);
   }),
 
   mount(contracts.resumeRun, async (context) => {
@@ -147,7 +154,7 @@ const interventionRoutes = [
       throw new ProblemError(locked ? 'locked' : disarmed ? 'not-armed' : 'not-possible-now', answer.why);
     }
     auditLater(context, 'run.resumed', { runId: params.runId });
-    return accepted(params.runId, answer);
+    return accepted(services, params.runId, answer);
   }),
 
   mount(contracts.stopRun, async (context) => {
@@ -160,7 +167,7 @@ const interventionRoutes = [
     }
     const answer = (await driverOf(services, membership.labId, params.runId)).stop(me.name);
     auditLater(context, 'run.stop-asked', { runId: params.runId });
-    return accepted(params.runId, answer);
+    return accepted(services, params.runId, answer);
   }),
 ];
 

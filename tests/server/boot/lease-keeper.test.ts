@@ -1,6 +1,6 @@
 import pino from 'pino';
 import { demoIds, seedDemo } from '@/db/demo/seed';
-import { LeaseKeeper } from '@/server/boot/lease-keeper';
+import { LeaseKeeper, type LeaseParts } from '@/server/boot/lease-keeper';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { sha256 } from '@/tests/support/lab-server';
@@ -10,12 +10,24 @@ const rig = { labId: demoIds.lab, rigId: demoIds.rig };
 const startUtcMs = Date.UTC(2031, 1, 14, 20);
 const leaseMs = 3_000;
 
+/** Lets what was asked of the database be answered before time goes on. */
+const settle = () => new Promise<void>((resolve) => void setTimeout(resolve, 15));
+let clock = new VirtualClock(startUtcMs, settle);
+
+function keeper(holder: string, more: Partial<LeaseParts> = {}): LeaseKeeper {
+  return new LeaseKeeper({
+    ...{ database: database().connection, clock, log: pino({ level: 'silent' }), holder, leaseMs, graceMs: 4_000 },
+    ...{ onTaken: () => undefined, onLost: () => undefined, onDatabase: () => undefined },
+    ...more,
+  });
+}
+
+beforeAll(async () => {
+  await seedDemo(database().connection, { nowUtcMs: startUtcMs, hashPassword: async () => 'no password in this test', sha256 });
+});
+
 test('a lease that is being renewed while the server ends is free for the next one at once', async () => {
-  const { connection } = database();
-  await seedDemo(connection, { nowUtcMs: startUtcMs, hashPassword: async () => 'no password in this test', sha256 });
-  const clock = new VirtualClock(startUtcMs, async () => undefined);
-  const keeper = (holder: string) =>
-    new LeaseKeeper({ database: connection, clock, log: pino({ level: 'silent' }), holder, leaseMs, onLost: () => undefined });
+  clock = new VirtualClock(startUtcMs, async () => undefined);
   for (let round = 1; round <= 10; round += 1) {
     const first = keeper(`first ${round}`);
     expect(await first.epochOf(rig)).not.toBeNull();
@@ -26,4 +38,54 @@ test('a lease that is being renewed while the server ends is free for the next o
     expect(await next.epochOf(rig)).not.toBeNull();
     await next.close();
   }
+});
+
+test('a rig whose driver is gone is taken over when its lease has run out, with a higher epoch; the one that comes back lets go', async () => {
+  clock = new VirtualClock(startUtcMs + 3_600_000, settle);
+  const lost: string[] = [];
+  const taken: number[] = [];
+  const first = keeper('first', { onLost: ({ rigId }) => lost.push(rigId) });
+  const second = keeper('second', { onTaken: () => taken.push(clock.monotonicMs()) });
+  const epoch = (await first.epochOf(rig)) as number;
+  first.renewRegularly();
+  second.renewRegularly();
+  expect(await second.epochOf(rig)).toBeNull();
+  await clock.advance(10_000);
+  expect([taken, lost]).toEqual([[], []]);
+
+  // As a process that is frozen: nothing of it runs, then all of it goes on.
+  const frozen = first as unknown as { renew(): Promise<void> };
+  const renew = frozen.renew.bind(first);
+  frozen.renew = async () => undefined;
+  const frozenMs = clock.monotonicMs();
+  await clock.advance(10_000, () => taken.length > 0);
+  expect((taken[0] ?? Infinity) - frozenMs).toBeLessThanOrEqual(leaseMs + 500);
+  expect(await second.epochOf(rig)).toBe(epoch + 1);
+  frozen.renew = renew;
+  await clock.advance(2_000);
+  expect(lost).toEqual([demoIds.rig]);
+  expect(first.holds(demoIds.rig)).toBe(false);
+  await first.close();
+  await second.close();
+});
+
+test('a database that does not answer for more than 4 s is told of, with the beginning, and so is its return', async () => {
+  clock = new VirtualClock(startUtcMs + 7_200_000, settle);
+  const told: (number | null)[] = [];
+  const one = keeper('one', { onDatabase: (sinceUtcMs) => told.push(sinceUtcMs) });
+  await one.epochOf(rig);
+  one.renewRegularly();
+  await clock.advance(5_000);
+  const { pool } = database().connection;
+  const working = { query: pool.query.bind(pool) };
+  const away = () => Promise.reject(new Error('connect ECONNREFUSED'));
+  Object.assign(pool, { query: away });
+  await clock.advance(3_500);
+  expect(told).toEqual([]);
+  await clock.advance(3_000);
+  expect(told).toEqual([startUtcMs + 7_200_000 + 6_000]);
+  Object.assign(pool, working);
+  await clock.advance(1_500);
+  expect(told[1]).toBeNull();
+  await one.close();
 });

@@ -124,6 +124,7 @@ type Name =
   | 'lease'
   | 'restart'
   | 'database'
+  | 'database back'
   | 'ready'
   | 'ready, warning anew'
   | 'ready, position lost'
@@ -146,7 +147,8 @@ function eventOf(name: Name, from: { snapshot: RunSnapshot; now: number }): RunE
     supply: heard({ kind: 'supply', at: now, present: false }),
     lease: heard({ kind: 'motion-ended', at: now, commandId, angleDeg: 10, cause: 'lease' }),
     restart: { type: 'server-restarted', at: now, aliveUtcMs: now.utcMs - 5000 },
-    database: { type: 'database-away', at: now, sinceUtcMs: now.utcMs - 5000 },
+    database: { type: 'database-away', at: now, sinceUtcMs: now.utcMs - 5000, acted: null },
+    'database back': { type: 'database-back', at: now },
     ready: heard({ kind: 'ready', at: now, controller: { ...controller, angleDeg: 20.18 }, sameBoot: true }),
     'ready, warning anew': heard({
       kind: 'ready',
@@ -211,6 +213,7 @@ const names: Name[] = [
   'lease',
   'restart',
   'database',
+  'database back',
   'ready',
   'ready, warning anew',
   'ready, position lost',

@@ -1,9 +1,7 @@
 import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
 import type { RigDocument } from '@/shared/rig/document';
 import type { ProtocolDocument, Step } from '@/shared/protocol/document';
-import { restored } from '@/server/engine/stored-snapshot';
 import { type Bench, makeBench, runStart, sent, shortProtocol, startUtcMs, underWay } from './rig-bench';
-import oldRun from './fixtures/snapshot-1.json';
 
 const withMotion = (rig: RigDocument, motion: Partial<NonNullable<RigDocument['motion']>>): RigDocument => ({
   ...rig,
@@ -109,33 +107,5 @@ describe('homing by itself', () => {
   test('is done where the edge is in the middle', async () => {
     const bench = await lost(demoRigNarrow);
     expect(sent(bench, 'home')).toHaveLength(1);
-  });
-});
-
-describe('a snapshot of the version before', () => {
-  const stored = () => structuredClone(oldRun) as { snapshot: Record<string, unknown>; chartVersion: number };
-
-  test('is taken up: the dwell goes on, and its count is unproved until the next pass', async () => {
-    const { snapshot, chartVersion } = stored();
-    const found = restored(snapshot, chartVersion);
-    expect(found).toMatchObject({
-      version: 2,
-      state: 'standing',
-      context: { position: { dwells: [], proof: { proved: null, slip: null } } },
-    });
-  });
-
-  test('goes on to the end under this version', async () => {
-    const bench = await underWay(100, runStart({ ...shortProtocol, onInterruption: 'resume' }));
-    bench.store.stored = JSON.stringify({ ...JSON.parse(bench.store.stored as string), ...stored(), chain: bench.store.events.at(-1) });
-    await bench.restart(2);
-    await bench.pass(200);
-    expect(bench.driver.facts().state).toBe('finished');
-    expect(bench.store.log().at(-1)).toMatchObject({ kind: 'dwell', outcome: 'done' });
-  });
-
-  test('of a version to come is left alone', () => {
-    expect(restored(stored().snapshot, 3)).toBeNull();
-    expect(restored(null, 1)).toBeNull();
   });
 });

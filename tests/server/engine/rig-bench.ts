@@ -3,7 +3,10 @@ import type { RunStart, StepRow, ChainedEvent } from '@/shared/archive/run-recor
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { type RunStore, type RunWrite, StaleRunError, type StoredRun } from '@/server/interfaces/run-store';
-import { RunDriver, type RunDriverParts } from '@/server/engine/run-driver';
+import { MemoryJournal } from '@/server/engine/memory-journal';
+import { mergeWrites, withAllToPerform } from '@/server/engine/merge-journal';
+import { RunDriver } from '@/server/engine/run-driver';
+import type { RunDriverParts } from '@/server/engine/run-driver-parts';
 import type { Arm, Effect } from '@/server/engine/run-context';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import { FakeLink } from './fake-link';
@@ -94,6 +97,7 @@ export interface Bench {
   clock: VirtualClock;
   link: FakeLink;
   store: MemoryStore;
+  journal: MemoryJournal;
   driver: RunDriver;
   start: RunStart;
   performed: Effect[];
@@ -110,6 +114,7 @@ export function makeBench(start: RunStart = runStart()): Bench {
   const clock = new VirtualClock(startUtcMs, settle);
   const link = new FakeLink(clock);
   const store = new MemoryStore(start);
+  const journal = new MemoryJournal();
   const performed: Effect[] = [];
   const errors: unknown[] = [];
   const arm = { now: start.arm };
@@ -117,6 +122,7 @@ export function makeBench(start: RunStart = runStart()): Bench {
     start,
     stored,
     store,
+    journal,
     link,
     clock,
     sha256,
@@ -128,6 +134,7 @@ export function makeBench(start: RunStart = runStart()): Bench {
     clock,
     link,
     store,
+    journal,
     start,
     performed,
     errors,
@@ -139,6 +146,9 @@ export function makeBench(start: RunStart = runStart()): Bench {
       link.forget();
       clock.after(2000, () => link.lapseLease());
       await clock.advance(1000 * afterS);
+      const kept = await journal.read();
+      if (kept.length > 0) await mergeWrites(store, withAllToPerform(kept));
+      await journal.clear();
       bench.driver = new RunDriver(parts(await store.load()));
       bench.driver.recover();
       await clock.advance(0);

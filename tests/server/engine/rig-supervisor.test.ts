@@ -1,3 +1,4 @@
+import { MemoryJournals } from '@/server/engine/memory-journal';
 import { RigSupervisor, StartRefused } from '@/server/engine/rig-supervisor';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import type { Arm, Effect } from '@/server/engine/run-context';
@@ -27,6 +28,7 @@ interface Lab {
   runs: Runs;
   performed: Effect[];
   arms: Map<string, Arm>;
+  journals: MemoryJournals;
   newSupervisor(): RigSupervisor;
   make(more?: Partial<RunStart>): RunStart;
   north: FakeLink;
@@ -38,9 +40,11 @@ function makeLab(): Lab {
   const runs = new Runs();
   const performed: Effect[] = [];
   const arms = new Map<string, Arm>(['north-bench', 'south-bench'].map((rigId) => [rigId, runStart().arm as Arm]));
+  const journals = new MemoryJournals();
   const newSupervisor = () =>
     new RigSupervisor({
       store: runs,
+      journals,
       clock,
       sha256,
       linkOf: (rigId) => links.get(rigId) ?? null,
@@ -51,7 +55,7 @@ function makeLab(): Lab {
       perform: (effect) => performed.push(effect),
     });
   const make = (more: Partial<RunStart> = {}) => runs.add(runStart(shortProtocol, more));
-  return { clock, links, runs, performed, arms, newSupervisor, make, north: links.get('north-bench') as FakeLink };
+  return { clock, links, runs, performed, arms, journals, newSupervisor, make, north: links.get('north-bench') as FakeLink };
 }
 
 const refusal = (start: () => unknown): StartRefused => {

@@ -38,7 +38,7 @@ describe('hold', () => {
       holdsSentBeforeWrite.push(sent(bench, 'hold').length);
       return 'none';
     };
-    expect(bench.driver.hold('Ben')).toEqual({ ok: true, serverAtUtcMs: startUtcMs + 30_000 });
+    expect(bench.driver.hold('Ben')).toMatchObject({ ok: true, serverAtUtcMs: startUtcMs + 30_000 });
     await bench.pass(1);
     expect(holdsSentBeforeWrite).toEqual([1, 1]);
   });

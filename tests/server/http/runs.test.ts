@@ -257,9 +257,9 @@ describe('hold and stop', () => {
       Object.assign(pool, { connect: away, query: away });
       expect((await lab.as('viewer', 'GET', runs).expect(503)).body.code).toBe('database-away');
       expect(lab.station().link.controller()?.moving).toBe(true);
-      await lab.intervene(runId, 'stop', { who: 'viewer' }).expect(202);
-      await lab.advance(5_000);
+      await Promise.all([lab.intervene(runId, 'stop', { who: 'viewer' }).expect(202), lab.advance(5_000)]);
       expect(lab.station().link.controller()?.moving).toBe(false);
+      expect(lab.services.supervisor.driverOf(runId)?.facts().reason).toMatch(/The database is away since \d\d:\d\d:\d\d UTC/);
       Object.assign(pool, working);
       await lab.advance(10_000);
     });

@@ -1,7 +1,7 @@
 import { armRig, currentArm, endArm } from '@/server/store/arms';
 import { createIdempotency, sweepIdempotencyKeys } from '@/server/store/idempotency';
 import { countUse, forgetUses, sweepRateLimits } from '@/server/store/rate-limits';
-import { giveRigLease, takeRigLease } from '@/server/store/rig-leases';
+import { freeRigs, giveRigLeases, renewRigLeases, takeRigLease } from '@/server/store/rig-leases';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { eveningUtcMs, makeLab, makeRig, makeUser } from './rows';
 
@@ -140,7 +140,12 @@ describe('rig leases', () => {
     expect(await take('a', 4999)).toBe(1);
     expect(await take('b', 9999)).toBe(2);
     expect(await take('a', 10_000)).toBeNull();
-    await giveRigLease(db(), { labId: lab.id, rigId, holder: 'b', nowUtcMs: eveningUtcMs + 10_000 });
+    await giveRigLeases(db(), { holder: 'b', nowUtcMs: eveningUtcMs + 10_000 });
+    expect(await freeRigs(db(), [rigId], eveningUtcMs + 9_999)).toEqual(new Set());
+    expect(await freeRigs(db(), [rigId], eveningUtcMs + 10_000)).toEqual(new Set([rigId]));
     expect(await take('a', 10_000)).toBe(3);
+    expect(await renewRigLeases(db(), { holder: 'a', untilUtcMs: eveningUtcMs + 20_000 })).toEqual(new Set([rigId]));
+    expect(await renewRigLeases(db(), { holder: 'b', untilUtcMs: eveningUtcMs + 30_000 })).toEqual(new Set());
+    expect(await take('b', 19_999)).toBeNull();
   });
 });

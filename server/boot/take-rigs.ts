@@ -1,0 +1,59 @@
+import type { Services } from '../http/services';
+import type { StationRig } from '../interfaces/rig-stations';
+import { findRig } from '../store/rigs';
+import { unfinishedRuns } from '../store/runs-read';
+import type { RigSide } from './build-rigs';
+import type { RigKey } from './lease-keeper';
+
+/** How a process comes to drive rigs: at its start those that nobody drives, later those whose driver is gone. */
+export class RigTaking {
+  /** One rig after the other: each reads the unfinished runs. */
+  private last: Promise<unknown> = Promise.resolve();
+
+  constructor(
+    private readonly services: Services,
+    private readonly side: Pick<RigSide, 'leases' | 'arms' | 'locks' | 'stations'>,
+  ) {}
+
+  /** Those that another process drives are waited for, and keep none of the others waiting. */
+  takeAll(rigs: readonly StationRig[]): Promise<void> {
+    return this.inTurn(() => this.take(rigs));
+  }
+
+  /** The lease of a rig that was waited for is this process's now. */
+  takenOver({ labId, rigId }: RigKey): Promise<void> {
+    return this.inTurn(async () => {
+      const rig = await findRig(this.services.database.db, labId, rigId);
+      if (rig !== null) await this.take([rig]);
+    });
+  }
+
+  private async take(rigs: readonly StationRig[]): Promise<void> {
+    const { services, side } = this;
+    for (const rig of rigs) {
+      if ((await side.leases.epochOf({ labId: rig.labId, rigId: rig.id })) === null) continue;
+      await side.arms.load({ labId: rig.labId, rigId: rig.id });
+      await side.locks.load({ labId: rig.labId, rigId: rig.id });
+      await side.stations.put(rig);
+    }
+    const ids = new Set(rigs.map(({ id }) => id));
+    const isOurs = (rigId: string) => ids.has(rigId) && side.leases.holds(rigId);
+    for (const run of await unfinishedRuns(services.database.db)) {
+      if (!isOurs(run.rigId)) continue;
+      services.activeRuns.add(run);
+      services.stations.loadMasses(run.rigId, run.start.rig);
+    }
+    await services.access.refresh(services.watchedLabs());
+    const { quarantined } = await services.supervisor.recover(isOurs);
+    for (const { start, why } of quarantined) {
+      services.activeRuns.remove(start.runId);
+      services.log.error({ runId: start.runId, rigId: start.rigId }, why);
+    }
+  }
+
+  private inTurn(deed: () => Promise<void>): Promise<void> {
+    const turn = this.last.then(deed, deed);
+    this.last = turn.catch(() => undefined);
+    return turn;
+  }
+}

@@ -1,0 +1,43 @@
+import { Worker } from 'node:worker_threads';
+import { threadOf } from './worker-tasks';
+
+/** Seats of the shared memory: what the loop says of itself, in whole milliseconds of the process' monotonic clock. */
+export const SEATS = { beatMs: 0, lateMs: 1 } as const;
+
+export interface WatchdogSetting {
+  shared: SharedArrayBuffer;
+  /** A loop that is later than this is slow, ms. */
+  slowMs: number;
+  /** A loop that has been slow for so long is given up, ms. */
+  longestMs: number;
+}
+
+const BEAT_MS = 100;
+const usual = { slowMs: 1_000, longestMs: 3_000 };
+
+/**
+ * Watches the event loop from a thread of its own: a loop that lags by more than a second for three seconds cannot drive a rig. The process
+ * ends at once; its leases lapse, the controller holds, and another process takes the rigs over.
+ */
+export function startWatchdog(limits: Omit<WatchdogSetting, 'shared'> = usual): { stop(): Promise<void> } {
+  const shared = new SharedArrayBuffer(2 * Float64Array.BYTES_PER_ELEMENT);
+  const seats = new Float64Array(shared);
+  let dueMs = performance.now() + BEAT_MS;
+  const beat = () => {
+    const nowMs = performance.now();
+    seats[SEATS.lateMs] = nowMs - dueMs;
+    seats[SEATS.beatMs] = performance.timeOrigin + nowMs;
+    dueMs = nowMs + BEAT_MS;
+  };
+  beat();
+  const timer = setInterval(beat, BEAT_MS);
+  timer.unref();
+  const worker = new Worker(threadOf('watchdog-thread.ts'), { eval: true, execArgv: [], workerData: { ...limits, shared } });
+  worker.unref();
+  return {
+    stop: async () => {
+      clearInterval(timer);
+      await worker.terminate();
+    },
+  };
+}
