@@ -1,4 +1,5 @@
 import { RealClock } from '@/server/boot/real-clock';
+import { MemoryJournal } from '@/server/engine/memory-journal';
 import { RehearsalStore } from '@/server/engine/rehearsal/rehearsal-store';
 import { RunDriver } from '@/server/engine/run-driver';
 import { sha256Hex } from '@/server/evaluation/sha256';
@@ -105,7 +106,7 @@ async function drive(rounds: number) {
   const store = new RehearsalStore(start);
   const errors: string[] = [];
   const driver = new RunDriver({
-    ...{ start, stored: null, store, link, clock, sha256: sha256Hex },
+    ...{ start, stored: null, store, journal: new MemoryJournal(), link, clock, sha256: sha256Hex },
     armNow: () => null,
     perform: () => undefined,
     onError: (error) => void errors.push(String(error)),
