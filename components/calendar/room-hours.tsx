@@ -1,3 +1,4 @@
+import { useRouter, type Href } from 'expo-router';
 import { useState } from 'react';
 import { View } from 'react-native';
 import { fieldErrors, useLabMutation, useLabQuery, useMay, wordsOf } from '@/components/api';
@@ -24,12 +25,13 @@ function RoomPanel({ rig }: { rig: { id: string; name: string } }) {
   const mayEdit = useMay('rig.edit');
   const hours = useLabQuery(readRoomHours, { params: { rigId: rig.id } }).data?.data;
   const [editing, setEditing] = useState(false);
+  const router = useRouter();
   return (
     <Panel className="gap-2" testID="room">
       <Body strong>{rig.name}</Body>
       {hours === undefined ? null : <HoursWords hours={hours} />}
-      {mayEdit.ok && hours !== undefined ? (
-        <View className="flex-row">
+      <View className="flex-row flex-wrap gap-2">
+        {mayEdit.ok && hours !== undefined ? (
           <Button
             icon="edit"
             label="Change"
@@ -37,8 +39,15 @@ function RoomPanel({ rig }: { rig: { id: string; name: string } }) {
             onPress={() => setEditing(true)}
             testID="change-hours"
           />
-        </View>
-      ) : null}
+        ) : null}
+        <Button
+          icon="document"
+          label="Door card"
+          accessibilityLabel={`Door card of ${rig.name}`}
+          onPress={() => router.push(`/rigs/${rig.id}/door` as Href)}
+          testID="door-card-of"
+        />
+      </View>
       {editing && hours !== undefined ? <HoursSheet rig={rig} hours={hours} onClose={() => setEditing(false)} /> : null}
     </Panel>
   );

@@ -28,6 +28,7 @@ const screen = (name: keyof Screens): ComponentType =>
 
 export const CalendarScreen = screen('CalendarScreen');
 export const DataScreen = screen('DataScreen');
+export const DoorScreen = screen('DoorScreen');
 export const EditorScreen = screen('EditorScreen');
 export const EvaluationScreen = screen('EvaluationScreen');
 export const FirstMoveScreen = screen('FirstMoveScreen');

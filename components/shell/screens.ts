@@ -1,6 +1,7 @@
 export { CalendarScreen } from '@/components/calendar/calendar-screen';
 export { DataScreen } from '@/components/data/data-screen';
 export { ImportScreen } from '@/components/data/import-screen';
+export { DoorScreen } from '@/components/doors/door-screen';
 export { EvaluationScreen } from '@/components/evaluation/evaluation-screen';
 export { FirstMoveScreen } from '@/components/link/first-move-screen';
 export { LabScreen } from '@/components/lab/lab-screen';

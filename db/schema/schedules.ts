@@ -103,3 +103,20 @@ export const calendarFeeds = pgTable(
   },
   (table) => [primaryKey({ columns: [table.labId, table.userId] }), uniqueIndex('calendar_feeds_token').on(table.tokenHash)],
 );
+
+/** Cards at the doors of the rooms: whom to ring, and the hash of the address at which each can be read without an account. */
+export const doorCards = pgTable(
+  'door_cards',
+  {
+    labId: key('lab_id').notNull(),
+    rigId: key('rig_id').notNull(),
+    ring: text('ring').notNull(),
+    tokenHash: text('token_hash').notNull(),
+    madeAt: instant('made_at').notNull(),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.rigId] }),
+    foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
+    uniqueIndex('door_cards_token').on(table.tokenHash),
+  ],
+);

@@ -1,4 +1,5 @@
 import * as data from './data';
+import * as doors from './doors';
 import * as evaluations from './evaluations';
 import * as link from './link';
 import * as people from './people';
@@ -23,6 +24,7 @@ export const routes: readonly RouteContract[] = [
   protocols,
   runs,
   schedules,
+  doors,
   data,
   evaluations,
 ].flatMap((module) => Object.values(module).filter(isRoute));

@@ -42,6 +42,7 @@ const publicPlaces: Place[] = [
   { name: 'forgotten-password', path: '/forgotten-password', arrives: '' },
   { name: 'reset-password', path: '/reset-password?token=none', arrives: '' },
   { name: 'invitation', path: '/invitations/none', arrives: '' },
+  { name: 'door', path: '/doors/none', arrives: '' },
 ];
 
 function places(): Place[] {
@@ -89,6 +90,7 @@ function places(): Place[] {
       arrives: 'evaluation-screen',
       first: (hand) => hand.taps('budget-table-toggle'),
     },
+    { name: 'door-card', path: `${rig}/door`, arrives: 'door-screen' },
     { name: 'calendar', path: '/calendar', arrives: 'calendar-screen', first: async (hand) => void (await hand.reads('room')) },
     { name: 'schedule', path: '/calendar', arrives: 'calendar-screen', first: opened('schedule-a-run', 'schedule-confirm') },
     { name: 'lab', path: '/lab', arrives: 'lab-screen' },

@@ -115,4 +115,23 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.sees('None. Each start is made by hand.');
     await lab().server.as('keeper', 'DELETE', `/labs/${demoIds.lab}/calendar-feed`).expect(204);
   });
+
+  chapter('a card for the door is printed, and a page hangs there that says when to keep out', async () => {
+    await hand.taps('door-card-of');
+    await hand.at('door-screen').waitFor();
+    await hand.types('door-ring', 'Casimir Thornquist, extension 204');
+    await hand.taps('make-door');
+    const address = await hand.reads('door-address', /\/doors\/.{40,}/);
+    await hand.reads('paper-card', /Do not enter.*extension 204/);
+    await hand.shoots('door-screen');
+    await hand.context.clearCookies();
+    await hand.page.goto(address);
+    await hand.reads('door-card', /No measurement is on.*extension 204/);
+    await lab().server.arm(20);
+    await hand.page.reload();
+    await hand.reads('door-card', /Do not enter.*armed.*Until.*extension 204/);
+    expect(await hand.page.getByRole('button').count()).toBe(0);
+    await hand.shoots('door');
+    await lab().server.as('operator', 'DELETE', `/labs/${demoIds.lab}/rigs/${demoIds.rig}/arm`).expect(204);
+  });
 });

@@ -1,6 +1,7 @@
 import type { MountedRoute } from '../route-context';
 import { armingRoutes } from './arming';
 import { dataRoutes } from './data';
+import { doorRoutes } from './doors';
 import { evaluationRoutes } from './evaluations';
 import { lineRoutes } from './line';
 import { liveRoutes } from './live';
@@ -22,6 +23,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...runRoutes,
   ...liveRoutes,
   ...scheduleRoutes,
+  ...doorRoutes,
   ...dataRoutes,
   ...evaluationRoutes,
 ];

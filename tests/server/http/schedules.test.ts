@@ -173,3 +173,34 @@ test('a calendar program reads it at a secret address, and no longer when that i
   await lab.as('viewer', 'DELETE', `${base}/calendar-feed`).expect(204);
   await read().expect(404);
 });
+
+test('the door card says when to keep out, until when and whom to ring, to whoever knows its address', async () => {
+  const path = `${base}/rigs/${demoIds.rig}/door`;
+  expect((await lab.as('viewer', 'GET', path).expect(200)).body).toEqual({ ring: '', madeAt: null });
+  await lab.as('operator', 'PUT', path).send({ ring: 'the desk' }).expect(403);
+  expect((await lab.as('keeper', 'PUT', path).send({ ring: ' ' }).expect(400)).body.errors[0].message).toBe('say whom to ring and how');
+  const { body } = await lab.as('keeper', 'PUT', path).send({ ring: 'the desk, 204' }).expect(200);
+  const read = async () =>
+    (
+      await request(lab.built.app)
+        .get(`/api${new URL(body.address as string).pathname}`)
+        .expect(200)
+    ).body;
+  expect(await read()).toMatchObject({ state: 'free', untilAt: null, ring: 'the desk, 204', rigName: 'North bench' });
+  await lab.arm(10);
+  const armed = await read();
+  expect(armed).toMatchObject({ state: 'armed' });
+  expect(Math.abs(Date.parse(armed.untilAt) - lab.clock.utcMs() - 10 * hour)).toBeLessThan(10 * minute);
+  const runId = (await lab.askStart(protocolId).expect(201)).body.id as string;
+  expect(await read()).toMatchObject({ state: 'run', untilAt: expect.any(String) });
+  await lab.intervene(runId, 'stop').expect(202);
+  await lab.until(runId, 'stopped');
+  expect(await read()).toMatchObject({ state: 'free' });
+  expect(Object.keys(await read()).sort()).toEqual(
+    ['labName', 'nextAt', 'ring', 'rigName', 'serverAt', 'state', 'timeZone', 'untilAt'].sort(),
+  );
+  await lab.as('keeper', 'DELETE', path).expect(204);
+  await request(lab.built.app)
+    .get(`/api${new URL(body.address as string).pathname}`)
+    .expect(404);
+});

@@ -1,0 +1,5 @@
+import { DoorScreen } from '@/components/shell/lazy-screens';
+
+export default function RigDoor() {
+  return <DoorScreen />;
+}
