@@ -14,6 +14,7 @@ import { planTimeline } from '@/shared/protocol/timeline';
 import type { RigDocument } from '@/shared/rig/document';
 import { faultKinds, isFaultKind } from '../engine/rehearsal/rehearsal-faults';
 import { type Rehearsal, rehearse } from '../engine/rehearsal/rehearse';
+import { BeyondFirmware } from '../links/board/commission';
 import { writeArchiveFolder } from '../evaluation/archive-files';
 import { sha256Hex } from '../evaluation/sha256';
 import { type Choice, chosenProtocol, listed, Unusable } from './chosen-protocol';
@@ -222,6 +223,7 @@ export async function main(args: readonly string[], output: Output = toProcess):
     return 0;
   } catch (error) {
     if (error instanceof NotYetError) output.err(`rehearse: ${error.message} [${error.code}]\n`);
+    else if (error instanceof BeyondFirmware) output.err(`rehearse: The rig cannot be driven by the controller board: ${error.message}\n`);
     else if (error instanceof Unusable) output.err(`rehearse: ${error.message}\n`);
     else throw error;
     return 2;

@@ -52,3 +52,20 @@ test('gives the G that the pendulum was made with, from an archive that verifies
   expect(passes.length).toBeGreaterThanOrEqual(4);
   expect(passes.every(({ data }) => Math.abs(data.offDeg ?? NaN) < 1.01 / rig.motion!.stepsPerDegree)).toBe(true);
 }, 60_000);
+
+test('a rig that asks for more than the firmware can do is refused in a sentence', async () => {
+  writeFileSync(join(folder, 'fine.json'), JSON.stringify({ ...rig, motion: { ...rig.motion, stepsPerDegree: 2000 } }));
+  writeFileSync(join(folder, 'fine-protocol.json'), JSON.stringify(protocol));
+  let told = '';
+  const code = await main(
+    [join(folder, 'fine-protocol.json'), '--rig', join(folder, 'fine.json'), '--board', '--out', join(folder, 'fine')],
+    {
+      out: (text) => void (told += text),
+      err: (text) => void (told += text),
+    },
+  );
+  expect({ code, told }).toEqual({
+    code: 2,
+    told: expect.stringMatching(/^rehearse: The rig cannot be driven by the controller board: .+ deg\/s.*\n$/),
+  });
+}, 30_000);

@@ -1,5 +1,6 @@
 import { decodeLine, encode, FLAG, hex8, NO_SESSION, PROTOCOL_VERSION, type Order, type Reply } from '@/firmware-protocol/codec';
 import type { RigMotion } from '@/shared/rig/document';
+import { teachRefusal } from '../link-words';
 import { limitsOf } from '../rig-units';
 import { CPU_HZ } from './avr-core';
 import type { BoardSession } from './board-session';
@@ -21,12 +22,16 @@ export function commission(session: BoardSession, rig: RigMotion, { homedAt }: {
   const hi = keeper.ask({ word: 'hello', ...PROTOCOL_VERSION });
   if (hi.body.word !== 'hi') throw new Error(`the emulated board does not greet: ${JSON.stringify(hi.body)}`);
   keeper.session = hi.body.session;
-  keeper.ask({ word: 'teach', ...limitsOf(rig) });
+  const lesson = keeper.put({ word: 'teach', ...limitsOf(rig) });
+  if (lesson.body.word === 'no') throw new BeyondFirmware(teachRefusal(rig, lesson.body).message);
   if (homedAt === null) return;
   keeper.turn({ word: 'home', tag: hex8(1) });
   const { speed, acceleration } = limitsOf(rig);
   if (homedAt !== 0) keeper.turn({ word: 'move', tag: hex8(2), position: homedAt, speed, acceleration, beginUs: null });
 }
+
+/** The rig asks for more than the firmware can do; the message says what, and what the most is. */
+export class BeyondFirmware extends Error {}
 
 class Keeper {
   session = NO_SESSION;
@@ -44,13 +49,18 @@ class Keeper {
 
   /** @throws Error when it is refused: a keeper would not go on either */
   ask(order: Order): Reply {
+    const reply = this.put(order);
+    if (reply.body.word === 'no') throw new Error(`the emulated board refuses ${order.word}: ${reply.body.code} ${reply.body.detail}`);
+    return reply;
+  }
+
+  put(order: Order): Reply {
     this.number += 1;
     const { number, session } = this;
     const lines = this.bench.write(encode({ kind: 'request', epoch: 0, session, number, order }), this.nowMs);
     this.nowMs = Math.max(this.nowMs, this.bench.msAt(this.bench.board.cycle));
     const reply = lines.map(({ text }) => decodeLine(text)).find((item): item is Reply => item.kind === 'reply');
     if (reply === undefined) throw new Error(`the emulated board did not answer ${order.word}`);
-    if (reply.body.word === 'no') throw new Error(`the emulated board refuses ${order.word}: ${reply.body.code} ${reply.body.detail}`);
     return reply;
   }
 
