@@ -3,7 +3,7 @@ import { torqueGradientPerG, torquePerG } from '../physics/torque';
 import { cosine, offset, ringDownSegment, sine } from '../statistics/ring-down';
 import { isOscillation } from '../statistics/ring-down-start';
 import { fitSeparable, solveAtFixedAlpha } from '../statistics/variable-projection';
-import type { Segment } from './analysis';
+import { dataOf, type Segment } from './segment';
 import type { DwellFit, FitBias, Ringing, Start } from './ring-down-fit';
 import type { GSolution, GSystem } from './solve-g';
 
@@ -25,16 +25,14 @@ export function curvatureBias(
   const { system, solution, shifts, before } = at;
   const { gamma } = solution;
   const omega = Math.sqrt(solution.omega0Squared - gamma * gamma);
-  const starts = segments.map((segment, i) => startOf(found, i, { before, omega: segmentOmega(omega, shifts[i] as number) }));
+  const starts = segments.map((segment, i) => {
+    const own = before === null ? null : { starts: before.starts[i] ?? [], ringing: before.ringing[i] ?? [] };
+    const setting = { omega: Math.sqrt(omega * omega + (shifts[i] as number)), gamma: found.fit.alpha[1] as number, before: own };
+    return startsOf(segment, found.fit.segments[i] as { coefficients: Float64Array }, setting);
+  });
   const exact = segments.map((segment, i) => {
-    const y = exactRinging(segment, { system, solution, start: starts[i] as Start });
-    return ringDownSegment({
-      tS: segment.averages.t,
-      y,
-      weight: segment.averages.weight,
-      centreS: segment.centreS,
-      shift: shifts[i] as number,
-    });
+    const y = exactRinging(segment, { system, solution, starts: starts[i] as Start[] });
+    return ringDownSegment({ ...dataOf(segment), y, shift: shifts[i] as number });
   });
   const fit =
     found.ringDown === null
@@ -46,34 +44,54 @@ export function curvatureBias(
     gamma: (fit.alpha[1] as number) - gamma,
     starts,
     ringing: fit.segments.map(ringingOf),
+    residuals: fit.segments.map(({ residuals }) => residuals),
   };
 }
 
-const segmentOmega = (omega: number, shift: number) => Math.sqrt(omega * omega + shift);
-
-function ringingOf({ coefficients }: { coefficients: Float64Array }): Ringing {
-  return { a: coefficients[cosine] as number, b: coefficients[sine] as number };
+/** The amplitudes from the window's start on, then those that each knock adds. */
+function ringingOf({ coefficients }: { coefficients: Float64Array }): Ringing[] {
+  return Array.from({ length: (coefficients.length - cosine) / 2 }, (_, k) => ({
+    a: coefficients[cosine + 2 * k] as number,
+    b: coefficients[sine + 2 * k] as number,
+  }));
 }
 
 /**
- * State at the start of a window, rad and rad/s. At first from the fitted amplitudes as if the pendulum were linear; later from what
- * the exact series lacked of the amplitudes fitted to the data.
+ * States at the start of a window and at its knocks, rad and rad/s. At first from the fitted amplitudes as if the pendulum were linear;
+ * later from what the exact series lacked of the amplitudes fitted to the data.
  */
-function startOf(found: DwellFit, index: number, { before, omega }: { before: FitBias | null; omega: number }): Start {
-  const gamma = found.fit.alpha[1] as number;
-  const fitted = ringingOf(found.fit.segments[index] as { coefficients: Float64Array });
-  const known = before?.starts[index];
-  const shown = before?.ringing[index];
-  if (known === undefined || shown === undefined) return { x: fitted.a, v: omega * fitted.b - gamma * fitted.a };
-  const lacking = { a: fitted.a - shown.a, b: fitted.b - shown.b };
-  return { x: known.x + lacking.a, v: known.v + omega * lacking.b - gamma * lacking.a };
+function startsOf(segment: Segment, fit: { coefficients: Float64Array }, { omega, gamma, before }: StartSetting): Start[] {
+  return ringingOf(fit).map((fitted, k) => {
+    const atS = k === 0 ? 0 : (segment.knocksS[k - 1] as number);
+    const known = before?.starts[k];
+    const shown = before?.ringing[k];
+    if (known === undefined || shown === undefined) return stateAt(atS, fitted, { omega, gamma });
+    const lacking = stateAt(atS, { a: fitted.a - shown.a, b: fitted.b - shown.b }, { omega, gamma });
+    return { atS, x: known.x + lacking.x, v: known.v + lacking.v };
+  });
+}
+
+interface StartSetting {
+  omega: number;
+  gamma: number;
+  before: { starts: readonly Start[]; ringing: readonly Ringing[] } | null;
+}
+
+/** e^(−γt)(a cos ωt + b sin ωt) and its rate at an instant. */
+function stateAt(atS: number, { a, b }: Ringing, { omega, gamma }: { omega: number; gamma: number }): Start {
+  const decay = Math.exp(-gamma * atS);
+  const [cos, sin] = [decay * Math.cos(omega * atS), decay * Math.sin(omega * atS)];
+  return { atS, x: a * cos + b * sin, v: (omega * b - gamma * a) * cos - (omega * a + gamma * b) * sin };
 }
 
 /**
  * Departure from the equilibrium, averaged as the data are: the linear part is stepped exactly, the rest of the torque, a
  * thousandth of it, acts as kicks in between (Strang splitting).
  */
-function exactRinging(segment: Segment, { system, solution, start }: { system: GSystem; solution: GSolution; start: Start }): Float64Array {
+function exactRinging(
+  segment: Segment,
+  { system, solution, starts }: { system: GSystem; solution: GSolution; starts: readonly Start[] },
+): Float64Array {
   const { geometry, inertiaKgM2 } = system;
   const { bigG, kappa, gamma } = solution;
   const phiRad = ((segment.window.angleDeg ?? 0) * Math.PI) / 180;
@@ -81,11 +99,10 @@ function exactRinging(segment: Segment, { system, solution, start }: { system: G
   const torque = torquePerG(geometry, psi);
   const gradient = torqueGradientPerG(geometry, psi);
   const kick = (x: number) => (bigG / inertiaKgM2) * (torquePerG(geometry, psi - x) - torque + gradient * x);
-  const omega0Squared = solution.omega0Squared + (bigG * gradient) / inertiaKgM2;
-  const step = propagator(omega0Squared, gamma);
-  let { x, v } = start;
-  let at = 0;
-  const readAt = (tS: number): number => {
+  const step = propagator(solution.omega0Squared + (bigG * gradient) / inertiaKgM2, gamma);
+  let [at, x, v] = [0, 0, 0];
+  let jumps = 0;
+  const goTo = (tS: number) => {
     const h = (tS - at) / kicksPerReading;
     const advance = step(h);
     for (let k = 0; k < kicksPerReading; k += 1) {
@@ -94,6 +111,14 @@ function exactRinging(segment: Segment, { system, solution, start }: { system: G
       v += (h / 2) * kick(x);
     }
     at = tS;
+  };
+  const readAt = (tS: number): number => {
+    for (let next = starts[jumps]; next !== undefined && next.atS <= tS; next = starts[jumps]) {
+      if (next.atS > at) goTo(next.atS);
+      [x, v] = [x + next.x, v + next.v];
+      jumps += 1;
+    }
+    goTo(tS);
     return x;
   };
   const { t, spreadS } = segment.averages;

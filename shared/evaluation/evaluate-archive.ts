@@ -41,7 +41,7 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     method: plan.method,
     registered: plan.registered,
     chain: archive.chain,
-    alignment: null,
+    alignment: alignmentOf(analysis),
     period_s: withU(free.period),
     decayTime_s: free.decayTime === null ? null : withU(free.decayTime),
     kappa_N_m: kappa,
@@ -59,6 +59,12 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     warnings: [...archive.warnings, ...warningsOf(archive, analysis)],
   };
   return { result, curves: curvesOf(analysis), trialModel };
+}
+
+/** The offset is applied where it is more than twice its uncertainty. */
+function alignmentOf({ clockOffset }: Analysis): EvaluationResult['alignment'] {
+  const applied = clockOffset !== null && Math.abs(clockOffset.value) > 2 * clockOffset.u;
+  return { clockOffset_s: clockOffset, applied };
 }
 
 /** An empty control has a further key for its test of equivalence. */

@@ -1,7 +1,7 @@
 import { inertiaKgM2 } from '../physics/oscillator';
 import { geometryOf } from '../physics/torque';
 import type { RigDocument } from '../rig/document';
-import type { Segment } from './analysis';
+import type { Segment } from './segment';
 import type { FreeOscillator, MeasuredOscillator } from './free-oscillator';
 import type { Reversal } from './reversal';
 import type { DwellFit } from './ring-down-fit';

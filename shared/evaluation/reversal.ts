@@ -1,6 +1,6 @@
 import { abaDifference, countReversals, isAlternating, polynomialDifference, type DifferenceEstimate } from '../statistics/drift';
 import { bilinear } from '../statistics/symmetric';
-import type { Segment } from './analysis';
+import type { Segment } from './segment';
 import type { Known } from './free-oscillator';
 import { centreOf, type DwellFit } from './ring-down-fit';
 

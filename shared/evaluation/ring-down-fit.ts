@@ -23,18 +23,21 @@ export interface FitBias {
   centres: number[];
   omega: number;
   gamma: number;
-  /** The states from which the exact series began, and the amplitudes that the linear model found in them. */
-  starts: Start[];
-  ringing: Ringing[];
+  /** The states from which the exact series began and the jumps at its knocks, and the amplitudes that the linear model found in it. */
+  starts: Start[][];
+  ringing: Ringing[][];
+  /** What the linear model leaves of the exact series, each datum times the root of its weight. */
+  residuals: Float64Array[];
 }
 
-/** Departure from the equilibrium, rad, and its rate, rad/s, at the start of a window. */
+/** Departure from the equilibrium, rad, and its rate, rad/s, at the start of a window; at a knock: by how much they jump. */
 export interface Start {
+  atS: number;
   x: number;
   v: number;
 }
 
-/** Amplitudes of cosine and sine at the start of a window, rad. */
+/** Amplitudes of cosine and sine, rad; at a knock: those that are added. */
 export interface Ringing {
   a: number;
   b: number;

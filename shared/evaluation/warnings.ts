@@ -16,8 +16,8 @@ const noReversal: ArchiveWarning = {
 };
 
 /** What a reader of the result must know of how it came about. */
-export function warningsOf(archive: Archive, { reversal, free, solution }: Analysis): ArchiveWarning[] {
-  const warnings = oscillatorWarnings(free);
+export function warningsOf(archive: Archive, { reversal, free, solution, clockOffset }: Analysis): ArchiveWarning[] {
+  const warnings = [...oscillatorWarnings(free), ...clockWarnings(clockOffset)];
   if (reversal === null) return hasSwings(archive) ? [...warnings, noReversal] : warnings;
   const dwells = reversal.members.length;
   if (dwells < enoughDwells) {
@@ -71,4 +71,18 @@ function oscillatorWarnings(free: Analysis['free']): ArchiveWarning[] {
     });
   }
   return warnings;
+}
+
+/** Smaller offsets are common and do no harm, s. */
+const greatestClockS = 0.01;
+
+function clockWarnings(offset: Analysis['clockOffset']): ArchiveWarning[] {
+  if (offset === null || Math.abs(offset.value) <= Math.max(2 * offset.u, greatestClockS)) return [];
+  const way = offset.value > 0 ? 'later' : 'earlier';
+  return [
+    {
+      code: 'clock-offset',
+      message: `The channel's clock shows ${Math.abs(offset.value).toFixed(3)} s ${way} than the step log's (u ${offset.u.toFixed(3)} s); this was taken off.`,
+    },
+  ];
 }

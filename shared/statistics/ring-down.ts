@@ -12,11 +12,13 @@ export interface RingDownData {
   weight?: Float64Array;
   /** Time at which c₀ is the centre, s; absent: the mean of `tS`. */
   centreS?: number;
+  /** Instants (s) at which something knocked the pendulum: from each on the oscillation has a further cosine and sine. */
+  knocksS?: readonly number[];
   /** What the sources add to ω², rad2/s2; absent: 0. */
   shift?: number;
 }
 
-/** Order of the linear coefficients of a segment. */
+/** Order of the linear coefficients of a segment; each knock adds a cosine and a sine. */
 export const offset = 0;
 export const slope = 1;
 export const cosine = 2;
@@ -24,7 +26,7 @@ export const sine = 3;
 
 /** A segment for `fitSeparable` with the parameters [ω (rad/s), γ (1/s)]. */
 export function ringDownSegment(data: RingDownData): SeparableSegment {
-  const { tS, y, shift = 0 } = data;
+  const { tS, y, shift = 0, knocksS = [] } = data;
   const centreS = data.centreS ?? mean(tS);
   return {
     y,
@@ -34,12 +36,20 @@ export function ringDownSegment(data: RingDownData): SeparableSegment {
         omega: Math.sqrt((omega as number) ** 2 + shift),
         slope: (omega as number) / Math.sqrt((omega as number) ** 2 + shift),
         gamma: gamma as number,
+        knocksS,
       }),
   };
 }
 
-function ringDownBasis(tS: Float64Array, centreS: number, at: { omega: number; slope: number; gamma: number }): Basis {
-  const { omega, gamma } = at;
+interface BasisAt {
+  omega: number;
+  slope: number;
+  gamma: number;
+  knocksS: readonly number[];
+}
+
+function ringDownBasis(tS: Float64Array, centreS: number, at: BasisAt): Basis {
+  const { omega, gamma, knocksS } = at;
   const { exp, cos, sin } = Math;
   const n = tS.length;
   const one = new Float64Array(n).fill(1);
@@ -53,19 +63,29 @@ function ringDownBasis(tS: Float64Array, centreS: number, at: { omega: number; s
     c[i] = decay * cos(omega * t);
     s[i] = decay * sin(omega * t);
   }
-  return { columns: [one, time, c, s], derivatives: () => ringDownDerivatives(tS, at) };
+  const later = knocksS.flatMap((knockS) => [from(tS, knockS, c), from(tS, knockS, s)]);
+  return { columns: [one, time, c, s, ...later], derivatives: () => ringDownDerivatives(tS, at) };
+}
+
+/** The values from an instant on, 0 before. */
+function from(tS: Float64Array, knockS: number, values: Float64Array): Float64Array {
+  return values.map((value, i) => ((tS[i] as number) < knockS ? 0 : value));
 }
 
 /** d cos/dω = −t sin, d sin/dω = t cos, d/dγ = −t, each with the decay. */
-function ringDownDerivatives(tS: Float64Array, at: { omega: number; slope: number; gamma: number }): BasisDerivative[] {
+function ringDownDerivatives(tS: Float64Array, at: BasisAt): BasisDerivative[] {
   const tc = tS.map((t) => t * Math.exp(-at.gamma * t) * Math.cos(at.omega * t));
   const ts = tS.map((t) => t * Math.exp(-at.gamma * t) * Math.sin(at.omega * t));
-  return [
+  const first: BasisDerivative[] = [
     { column: cosine, parameter: 0, values: ts.map((value) => -at.slope * value) },
     { column: sine, parameter: 0, values: tc.map((value) => at.slope * value) },
     { column: cosine, parameter: 1, values: tc.map((value) => -value) },
     { column: sine, parameter: 1, values: ts.map((value) => -value) },
   ];
+  const later = at.knocksS.flatMap((knockS, k) =>
+    first.map(({ column, parameter, values }) => ({ column: column + 2 * (k + 1), parameter, values: from(tS, knockS, values) })),
+  );
+  return [...first, ...later];
 }
 
 function mean(values: ArrayLike<number>): number {

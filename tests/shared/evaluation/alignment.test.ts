@@ -1,0 +1,61 @@
+import { evaluateNight } from '../../support/evaluate-night';
+import { normalDeviates } from '../../support/lcg';
+import { alternatingAngles, type NightPlan } from '../../support/night';
+import { relativeDifference } from '../../support/check-data';
+import { closeRig, closeSourceAngleRad, wideRig, wideSourceAngleRad, withRig } from '../../support/reference-rigs';
+
+/** The channel's clock against the step log's. Figures: physics.md H2, H3. */
+
+const trueG = 6.6743e-11;
+const degrees = (rad: number) => (rad * 180) / Math.PI;
+const near = degrees(wideSourceAngleRad);
+const closeNear = degrees(closeSourceAngleRad);
+const motion = { stepsPerDegree: 44.444, minDeg: -175, maxDeg: 175, homeDeg: 90, maxSpeed_deg_s: 6, maxAcceleration_deg_s2: 2 };
+const wide: NightPlan = { rig: withRig(wideRig(), (r) => (r.motion = motion)), anglesDeg: alternatingAngles(8, near, -near), dwellS: 830 };
+const close: NightPlan = {
+  rig: withRig(closeRig(), (r) => (r.motion = motion)),
+  anglesDeg: alternatingAngles(8, closeNear, 180 - closeNear),
+  dwellS: 818,
+};
+
+const evaluated = (plan: NightPlan) => evaluateNight(plan).result;
+
+describe.each([
+  ['wide', wide],
+  ['close', close],
+])('on the %s rig', (_name, plan) => {
+  test.each([0.5, -7.5, 60, -98])('a clock that is %d s late is found and put right', (channelLateS) => {
+    const { alignment, G, warnings } = evaluated({ ...plan, channelLateS });
+    expect(Math.abs((alignment?.clockOffset_s?.value ?? NaN) - channelLateS)).toBeLessThan(0.1);
+    if (Math.abs(channelLateS) < 10) expect(alignment?.clockOffset_s?.value).toBeCloseTo(channelLateS, 3);
+    expect(alignment?.applied).toBe(true);
+    expect(warnings.map(({ code }) => code)).toContain('clock-offset');
+    expect(relativeDifference(G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
+  });
+
+  test('a clock that is right is left alone', () => {
+    const { alignment, warnings } = evaluated(plan);
+    expect(Math.abs(alignment?.clockOffset_s?.value ?? NaN)).toBeLessThan(1e-3);
+    expect(alignment?.applied).toBe(false);
+    expect(warnings.map(({ code }) => code)).not.toContain('clock-offset');
+  });
+});
+
+test('with 5 µrad of noise at 1 Hz the offset is known to some ms, and its uncertainty covers it', () => {
+  const normal = normalDeviates(23);
+  const { alignment } = evaluated({ ...wide, channelLateS: 0.25, reading: (angle) => angle + 5e-6 * normal() });
+  const { value, u } = alignment?.clockOffset_s ?? { value: NaN, u: NaN };
+  // 5.5 ms a swing at 10 Hz with all else left free (H3), so 17 ms at 1 Hz and 6 ms from eight swings.
+  expect(u).toBeGreaterThan(0.001);
+  expect(u).toBeLessThan(0.02);
+  expect(Math.abs(value - 0.25)).toBeLessThan(3 * u);
+});
+
+test('a still night tells no offset', () => {
+  const plan: NightPlan = { ...wide, anglesDeg: [near, near, near, near] };
+  const { alignment } = evaluateNight(plan, {}, (records) => ({
+    ...records,
+    steps: records.steps.filter(({ kind }) => kind !== 'swing'),
+  })).result;
+  expect(alignment).toEqual({ clockOffset_s: null, applied: false });
+});
