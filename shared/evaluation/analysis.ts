@@ -1,13 +1,12 @@
 import type { Archive, ArchivedSeries } from '../archive/read-archive';
-import { UnusableArchive } from '../archive/unusable-archive';
 import type { RingDownData } from '../statistics/ring-down';
-import { iterate, type FitOutcome } from './fit-rounds';
+import { iterate } from './fit-rounds';
 import { ringDownStart, type RingDownStart } from '../statistics/ring-down-start';
 import { scaleOf, withZero, type ChannelScale } from './channel-scale';
 import { coarseOffsetS, fineOffset, type ClockOffset } from './clock-offset';
-import { averagedAngles, reasonAgainstSamples, samplesIn, type DwellSamples } from './dwell-samples';
+import { averagedAngles, reasonAgainstSamples, beginningOf, samplesIn, type DwellSamples } from './dwell-samples';
 import { dwellWindows, lengthS, type DwellWindow } from './dwell-windows';
-import { measuredOscillator, type FreeOscillator, type MeasuredOscillator } from './free-oscillator';
+import { measuredOscillator, type FreeOscillator, type Known, type MeasuredOscillator } from './free-oscillator';
 import type { EvaluationPlan } from './registration';
 import { type Reversal } from './reversal';
 import { type Segment } from './segment';
@@ -55,6 +54,11 @@ export function analyse(archive: Archive, plan: EvaluationPlan): Analysis {
   return { ...better, clockOffset };
 }
 
+/** Share of a period in which the acceleration is taken. */
+const accelerationPeriods = 0.6;
+
+const omegaOf = ({ value, u, nu }: Known): Known => ({ value: (2 * Math.PI) / value, u: (2 * Math.PI * u) / value ** 2, nu });
+
 /** A coarse offset below this may be none, s; the fine search finds it. */
 const greatestUnnoticedS = 2;
 /** A smaller offset changes no window that is guarded, s. */
@@ -76,8 +80,13 @@ function analyseAt(
   const start = startOf(usable, rough, measured);
   refuseShort(usable, start === null ? null : (2 * Math.PI) / start.omega);
   const fitted = usable.filter(({ window }) => window.why === null);
-  const outcome = iterate({ archive, plan, measured, start, samples: fitted }, rough);
-  return { windows, samplesOf, measured, ...outcome };
+  const whole = iterate({ archive, plan, measured, start, samples: fitted }, rough);
+  if (plan.method !== 'acceleration') return { windows, samplesOf, measured, ...whole };
+  // The first motion after each swing, by the full step response of a pendulum that the whole dwells tell.
+  const begun = fitted.map((one) => beginningOf(one, accelerationPeriods * whole.free.period.value));
+  const held: MeasuredOscillator = { omega: omegaOf(whole.free.period), gamma: whole.free.gamma };
+  const early = iterate({ archive, plan, measured: held, start: null, samples: begun }, rough);
+  return { windows, samplesOf, measured: held, ...early };
 }
 
 /** First guess of a spot scale's zero, m: midway between the mean readings of near and far. */

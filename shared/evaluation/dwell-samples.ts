@@ -33,6 +33,13 @@ export function samplesIn(window: DwellWindow, series: SampleColumns, exclusions
   return { window, tS, reading, centreS: (middleUtcMs - window.fromUtcMs) / 1000 };
 }
 
+/** The same window as far as its first `lengthS` seconds, the centre reported in their middle. */
+export function beginningOf({ window, tS, reading }: DwellSamples, lengthS: number): DwellSamples {
+  const end = tS.findIndex((t) => t > lengthS);
+  const count = end < 0 ? tS.length : end;
+  return { window, tS: tS.slice(0, count), reading: reading.slice(0, count), centreS: lengthS / 2 };
+}
+
 function firstAtOrAfter(utcMs: Float64Array, at: number): number {
   let low = 0;
   let high = utcMs.length;

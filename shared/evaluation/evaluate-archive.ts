@@ -7,8 +7,11 @@ import { SingularMatrixError } from '../statistics/symmetric';
 import { analyse, type Analysis } from './analysis';
 import { controlTest } from './empty-control';
 import type { Known } from './free-oscillator';
-import { budgetFor, kappaU, trialModelOf } from './g-budget';
+import type { Budget } from './budget';
+import { budgetFor, kappaU, periodBudget, trialModelOf } from './g-budget';
+import { periodOutcome } from './period-method';
 import { monteCarlo, type TrialModel } from './monte-carlo';
+import { pretendOf } from './pretend';
 import { evaluationPlan, type EvaluationOptions, type EvaluationPlan } from './registration';
 import type { ControlResult, DwellResult, EvaluationResult, FitCurve } from './result';
 import { isMember, type Reversal } from './reversal';
@@ -31,9 +34,8 @@ export interface Evaluation {
 export function evaluateArchive(archive: Archive, options: EvaluationOptions = {}): Evaluation {
   const plan = evaluationPlan(archive, options);
   const analysis = analysisOf(archive, plan);
-  const budget = budgetFor(archive.rig, analysis);
-  const trialModel = trialModelOf(archive.rig, budget, analysis);
-  const { solution, reversal, free } = analysis;
+  const { reversal } = analysis;
+  const { solution, free, budget, trialModel } = plan.method === 'period' ? byPeriod(archive, analysis) : byEquilibria(archive, analysis);
   const u = budget?.u ?? null;
   const kappa = { value: inertiaKgM2(archive.rig) * free.omega0Squared.value, u: kappaU(archive.rig, free.omega0Squared) };
   const result: EvaluationResult = {
@@ -55,10 +57,33 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     },
     budget: budget?.lines ?? null,
     monteCarlo: trialModel === null ? null : monteCarlo(trialModel, options.trials ?? 0),
-    ...(hasSwings(archive) ? {} : { pretend: null }),
+    ...(hasSwings(archive) ? {} : { pretend: pretendOf(analysis) }),
     warnings: [...archive.warnings, ...warningsOf(archive, analysis)],
   };
   return { result, curves: curvesOf(analysis), trialModel };
+}
+
+interface Found extends Pick<Analysis, 'solution' | 'free'> {
+  budget: Budget | null;
+  trialModel: TrialModel | null;
+}
+
+function byEquilibria({ rig }: Archive, analysis: Analysis): Found {
+  const budget = budgetFor(rig, analysis);
+  return { ...analysis, budget, trialModel: trialModelOf(rig, budget, analysis) };
+}
+
+function byPeriod({ rig }: Archive, analysis: Analysis): Found {
+  const outcome = periodOutcome(rig, analysis);
+  const { solution, period } = outcome;
+  const budget = periodBudget(rig, outcome, analysis.segments);
+  const omega0Squared = { ...analysis.free.omega0Squared, value: solution.omega0Squared };
+  return {
+    solution,
+    free: { ...analysis.free, period, omega0Squared },
+    budget,
+    trialModel: trialModelOf(rig, budget, { solution }),
+  };
 }
 
 /** The offset is applied where it is more than twice its uncertainty. */

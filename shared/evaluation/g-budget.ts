@@ -13,6 +13,7 @@ import { reread } from './channel-scale';
 import type { Known } from './free-oscillator';
 import { gSystem } from './g-system';
 import type { TrialModel } from './monte-carlo';
+import type { PeriodOutcome } from './period-method';
 import { centreOf } from './ring-down-fit';
 import { NoSolutionError, solveG } from './solve-g';
 import type { TrialCore } from './trial-core';
@@ -34,6 +35,15 @@ export function budgetFor(rig: RigDocument, analysis: Analysis): Budget | null {
     observed: observedTerms(gOf, { reversal: reversal.known, period: free.period, decayTime: free.decayTime }),
     axisOffset: axisOffsetOf(rig),
   });
+}
+
+/** The budget of G by the time of swing: what the frequencies leave open stands in the line of the period. */
+export function periodBudget(rig: RigDocument, outcome: PeriodOutcome, segments: Analysis['segments']): Budget {
+  const stations = [...new Set(segments.map(({ window }) => window.stationKey))].filter((key) => key !== null);
+  const { solution, statistical, period, gOf } = outcome;
+  const sensitivity = period.u === 0 ? 0 : statistical.u / period.u;
+  const observed: ObservedTerm[] = [{ input: 'period_s', known: { ...period, nu: statistical.nu }, sensitivity }];
+  return budgetOf({ rig, bigG: solution.bigG, gOf, stations, lever: false, observed, axisOffset: null });
 }
 
 const relativeStep = 1e-4;
@@ -112,7 +122,11 @@ export function kappaU(rig: RigDocument, omega0Squared: Known): number {
 }
 
 /** What the Monte Carlo trials need; null without a budget. */
-export function trialModelOf(rig: RigDocument, budget: Budget | null, analysis: Analysis): TrialModel | null {
+export function trialModelOf(
+  rig: RigDocument,
+  budget: Budget | null,
+  analysis: Pick<Analysis, 'solution'> & Partial<Analysis>,
+): TrialModel | null {
   const { solution } = analysis;
   if (budget === null || solution === null || solution.bigG === 0) return null;
   return {
@@ -134,9 +148,9 @@ function lawOf({ nu, rectangular }: BudgetTerm): Law {
   return Number.isFinite(nu) ? { kind: 't', nu } : { kind: 'normal' };
 }
 
-function coreOf(rig: RigDocument, { reversal, solution, free, system }: Analysis): TrialCore | null {
+function coreOf(rig: RigDocument, { reversal, solution, free, system }: Partial<Analysis>): TrialCore | null {
   const { near, far } = rig.stations;
-  if (reversal === null || solution === null || system === null || near === undefined || far === undefined) return null;
+  if (!reversal || !solution || !system || !free || near === undefined || far === undefined) return null;
   const { geometry } = system;
   const restAt = (angleDeg: number) =>
     equilibriumRad({ geometry, kappa: solution.kappa, bigG: solution.bigG, phiRad: angleDeg * RAD_PER_DEG });

@@ -18,7 +18,7 @@ export interface EvaluationOptions {
 /** What is to be done, and whether that is what the protocol registered beforehand. */
 export interface EvaluationPlan {
   method: EvaluationMethod;
-  drift: 'aba' | 'polynomial';
+  drift: 'aba' | 'polynomial' | 'gls';
   order: number;
   channel: string;
   /** Null where nothing was registered. */
@@ -32,9 +32,9 @@ export interface EvaluationPlan {
 export function evaluationPlan(archive: Archive, options: EvaluationOptions): EvaluationPlan {
   const registered = archive.registered;
   const method = options.method ?? registered?.method ?? 'equilibrium';
-  if (method !== 'equilibrium') throw new NotYetError(`the method "${method}" is not built yet; "equilibrium" is`);
+  if (method === 'modulation')
+    throw new NotYetError('the method "modulation" is not built yet; "equilibrium", "acceleration" and "period" are');
   const drift = registered?.drift ?? 'aba';
-  if (drift === 'gls') throw new NotYetError('the drift model "gls" of protocol.json is not built yet; "aba" and "polynomial" are');
   const channel = chooseChannel(archive, options.channel ?? registered?.channel ?? null);
   const asRegistered =
     method === (registered?.method ?? 'equilibrium') && (registered?.channel === undefined || registered.channel === channel);

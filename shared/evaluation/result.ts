@@ -13,6 +13,15 @@ const controlResultSchema = z.strictObject({
 });
 export type ControlResult = z.infer<typeof controlResultSchema>;
 
+/** A still night's false near minus far, rad, and the overlapping Allan deviation of its dwells. */
+const pretendResultSchema = z.strictObject({
+  value: z.number(),
+  u: z.number().nullable(),
+  count: z.number().int(),
+  allan: z.array(z.strictObject({ tau_s: z.number(), deviation_rad: z.number() })),
+});
+export type PretendResult = z.infer<typeof pretendResultSchema>;
+
 const dwellResultSchema = z.strictObject({
   seq: z.number().int(),
   station: z.string(),
@@ -53,7 +62,7 @@ export const evaluationResultSchema = z.strictObject({
   monteCarlo: z
     .strictObject({ trials: z.number().int(), G_mean: z.number(), G_u: z.number(), interval95: z.tuple([z.number(), z.number()]) })
     .nullable(),
-  pretend: z.unknown().optional(),
+  pretend: pretendResultSchema.nullable().optional(),
   warnings: z.array(z.strictObject({ code: z.string(), message: z.string() })),
 });
 export type EvaluationResult = z.infer<typeof evaluationResultSchema>;

@@ -1,4 +1,12 @@
-import { abaDifference, countReversals, isAlternating, polynomialDifference, type DifferenceEstimate } from '../statistics/drift';
+import {
+  abaDifference,
+  countReversals,
+  isAlternating,
+  polynomialDifference,
+  type DifferenceEstimate,
+  type SidedValue,
+} from '../statistics/drift';
+import { walkDifference } from '../statistics/gls-drift';
 import { bilinear } from '../statistics/symmetric';
 import type { Segment } from './segment';
 import type { Known } from './free-oscillator';
@@ -24,7 +32,7 @@ export interface Reversal {
 export function reversalOf(
   segments: readonly Segment[],
   found: DwellFit,
-  drift: { kind: 'aba' | 'polynomial'; order: number },
+  drift: { kind: 'aba' | 'polynomial' | 'gls'; order: number },
 ): Reversal | null {
   const indices = segments.map((_, i) => i).filter((i) => isMember(segments[i] as Segment));
   indices.sort((a, b) => middleS(segments[a] as Segment) - middleS(segments[b] as Segment));
@@ -37,8 +45,7 @@ export function reversalOf(
   const count = countReversals(series);
   if (count === 0) return null;
   const alternates = isAlternating(series);
-  const estimate: DifferenceEstimate =
-    drift.kind === 'aba' && alternates && series.length >= 3 ? abaDifference(series) : polynomialDifference(series, drift.order);
+  const estimate = differenceOf(series, drift, alternates);
   const common = [0, 1].map((j) => centres.reduce((sum, { shift }, k) => sum + (estimate.weights[k] as number) * (shift[j] as number), 0));
   const coherent = bilinear(common, found.alphaCovariance, common);
   return {
@@ -51,6 +58,11 @@ export function reversalOf(
     count,
     notAlternating: drift.kind === 'aba' && !alternates,
   };
+}
+
+function differenceOf(series: readonly SidedValue[], drift: { kind: string; order: number }, alternates: boolean): DifferenceEstimate {
+  if (drift.kind === 'gls') return walkDifference(series);
+  return drift.kind === 'aba' && alternates && series.length >= 3 ? abaDifference(series) : polynomialDifference(series, drift.order);
 }
 
 /** Whether a fitted window counts in the reversal series. */

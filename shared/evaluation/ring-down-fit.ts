@@ -135,7 +135,7 @@ function straightResidual({ tS, y, weight }: RingDownData): number {
  * Residuals of a dwell hang together (drift, seismic noise), so the covariance that takes them as independent may be far too
  * small. The scatter of what each whole dwell says about (ω, γ) does not have that fault; the greater of the two is used.
  */
-function honestCovariance(fit: SeparableFit): Matrix {
+export function honestCovariance(fit: SeparableFit): Matrix {
   const count = fit.segments.length;
   if (count < 4) return fit.alphaCovariance;
   const inverse = fit.alpha.map((_, j) =>

@@ -28,11 +28,10 @@ function documentNotYet({ goodWhen, evaluation }: ProtocolDocument): Finding[] {
   const findings: Finding[] = [];
   if (goodWhen !== undefined)
     findings.push(finding('goodWhen', 'goodWhen is not built yet. Leave it out; exclusions can be made in the data afterwards.'));
-  const method = evaluation?.method ?? 'equilibrium';
-  const drift = evaluation?.drift ?? 'aba';
-  if (method !== 'equilibrium')
-    findings.push(finding('evaluation', `The evaluation method "${method}" is not built yet. Use "equilibrium".`));
-  if (drift !== 'aba') findings.push(finding('evaluation', `The drift removal "${drift}" is not built yet. Use "aba".`));
+  if (evaluation?.method === 'modulation')
+    findings.push(
+      finding('evaluation', 'The evaluation method "modulation" is not built yet. Use "equilibrium", "acceleration" or "period".'),
+    );
   return findings;
 }
 

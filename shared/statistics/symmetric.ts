@@ -4,7 +4,7 @@ export type Matrix = number[][];
 export class SingularMatrixError extends Error {}
 
 /** Lower triangle L with L Lᵀ = A. @throws SingularMatrixError when A is not positive definite. */
-function cholesky(a: Matrix): Matrix {
+export function cholesky(a: Matrix): Matrix {
   const n = a.length;
   const l: Matrix = Array.from({ length: n }, () => new Array<number>(n).fill(0));
   for (let i = 0; i < n; i += 1) {

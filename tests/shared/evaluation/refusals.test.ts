@@ -66,8 +66,8 @@ describe('the channel', () => {
 });
 
 describe('methods and rigs that this version does not know', () => {
-  test.each(['period', 'acceleration', 'modulation'] as const)('the method %s is refused as not yet built', (method) => {
-    expect(() => evaluateNight(wide, { method })).toThrow(expect.objectContaining({ code: 'not-yet' }) as Error);
+  test('the method modulation is refused as not yet built', () => {
+    expect(() => evaluateNight(wide, { method: 'modulation' })).toThrow(expect.objectContaining({ code: 'not-yet' }) as Error);
   });
 
   test('a difference that no G could make between the stations is refused', () => {

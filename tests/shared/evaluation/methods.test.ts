@@ -1,0 +1,112 @@
+import { allanDeviation, allanDeviations } from '@/shared/statistics/allan';
+import { walkFit } from '@/shared/statistics/gls-drift';
+import { relativeDifference } from '../../support/check-data';
+import { evaluateNight } from '../../support/evaluate-night';
+import { normalDeviates, sp1065Uniforms } from '../../support/lcg';
+import { alternatingAngles, type NightPlan } from '../../support/night';
+import { closeRig, closeSourceAngleRad, wideRig, wideSourceAngleRad, withRig } from '../../support/reference-rigs';
+
+/** Methods beside the equilibria, and still nights. Noise-free nights give back the G they were made with. */
+
+const trueG = 6.6743e-11;
+const degrees = (rad: number) => (rad * 180) / Math.PI;
+const near = degrees(wideSourceAngleRad);
+const closeNear = degrees(closeSourceAngleRad);
+const unmeasured = (rig = wideRig()) => withRig(rig, (r) => delete r.measured);
+const swings: NightPlan = { rig: unmeasured(), anglesDeg: [90, 0, 90, 0, 90, 0], dwellS: 1680 };
+
+describe('the time of swing', () => {
+  test.each<[string, NightPlan]>([
+    ['in line and across on the wide rig', swings],
+    ['near and across on the close rig', { rig: unmeasured(closeRig()), anglesDeg: [90, closeNear, 90, closeNear, 90], dwellS: 1680 }],
+  ])('%s', (_name, plan) => {
+    const { result } = evaluateNight(plan, { method: 'period' });
+    expect(result.method).toBe('period');
+    expect(relativeDifference(result.G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
+    expect(result.period_s?.value).toBeCloseTo(420, 6);
+  });
+
+  test('needs neither lever nor scale, and the source mass in proportion', () => {
+    const rig = withRig(unmeasured(), (r) => void Object.assign(r.sources.mass as object, { u: 0.0016 }));
+    const { result } = evaluateNight({ ...swings, rig, reading: (angle) => 3 * angle + 0.2 }, { method: 'period' });
+    // A scale three times too great bends nothing: only the small amplitude correction is three times its size.
+    expect(relativeDifference(result.G?.value ?? NaN, trueG)).toBeLessThan(1e-4);
+    const mass = result.budget?.find(({ input }) => input === 'sources.mass');
+    expect(relativeDifference(((mass?.sensitivity ?? NaN) * 1.6) / trueG, -1)).toBeLessThan(1e-3);
+    expect(result.budget?.map(({ input }) => input)).not.toContain('lever.distance');
+  });
+
+  test('says with noise how well it is known', () => {
+    const normal = normalDeviates(31);
+    const { result } = evaluateNight({ ...swings, reading: (angle) => angle + 2e-6 * normal() }, { method: 'period' });
+    const { value, u } = result.G as { value: number; u: number };
+    expect(Math.abs(value - trueG)).toBeLessThan(4 * u);
+    expect(u / trueG).toBeLessThan(0.05);
+  });
+
+  test('is refused where the sources stiffen the pendulum alike', () => {
+    const plan = { rig: unmeasured(), anglesDeg: alternatingAngles(4, near, -near), dwellS: 900 };
+    expect(() => evaluateNight(plan, { method: 'period' })).toThrow(
+      'steps.csv: the method "period" needs dwells or ring-downs at two angles',
+    );
+  });
+});
+
+test.each<[string, NightPlan]>([
+  ['wide', { rig: unmeasured(), anglesDeg: alternatingAngles(8, near, -near), dwellS: 830 }],
+  ['close', { rig: unmeasured(closeRig()), anglesDeg: alternatingAngles(8, closeNear, 180 - closeNear), dwellS: 818 }],
+])('the acceleration after each swing, %s rig', (_name, plan) => {
+  const { result } = evaluateNight(plan, { method: 'acceleration' });
+  expect(result.method).toBe('acceleration');
+  expect(relativeDifference(result.G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
+});
+
+test('generalised least squares against a wandering zero: the cost of 48 dwells (physics.md D4)', () => {
+  const series = Array.from({ length: 48 }, (_, k) => ({ timeS: 1000 * k, side: k % 2 === 0 ? (1 as const) : (-1 as const), value: 0 }));
+  const cost = (ratio: number) => (48 * walkFit(series, ratio).unitVariance) / 4;
+  expect(cost(0)).toBeCloseTo(1, 9);
+  // 1.0133, 1.111, 2.05 there with the walk averaged over each dwell; here it is taken at mid-dwell.
+  expect(cost(0.1)).toBeCloseTo(1.0133, 1);
+  expect(cost(1)).toBeGreaterThan(1.1);
+  expect(cost(10)).toBeGreaterThan(2.05);
+  const { weights } = walkFit(series, 1).estimate;
+  expect(weights.reduce((sum, w) => sum + w, 0)).toBeCloseTo(0, 12);
+  expect(weights.reduce((sum, w, k) => sum + w * (series[k]?.side ?? 0), 0)).toBeCloseTo(2, 12);
+});
+
+describe('a still night', () => {
+  const still = (reading: NightPlan['reading']): NightPlan => ({ anglesDeg: Array.from({ length: 17 }, () => near), dwellS: 840, reading });
+  const withoutSwings = (plan: NightPlan) =>
+    evaluateNight(plan, {}, (records) => ({ ...records, steps: records.steps.filter(({ kind }) => kind !== 'swing') })).result;
+
+  test('gives the false difference that the planned cadence would have given', () => {
+    const normal = normalDeviates(13);
+    const result = withoutSwings(still((_, tS) => 1e-4 + 2e-9 * tS + 1e-5 * normal()));
+    expect(result).toMatchObject({ G: null, reversal_rad: null });
+    const { value, u, count } = result.pretend as { value: number; u: number; count: number };
+    expect(count).toBe(15);
+    // σ 10 µrad at 1 Hz, 16 dwells of 834 s: 2 · 10 µrad / √(16 · 834), and nothing of the drift.
+    expect(u / 1.73e-7).toBeGreaterThan(0.5);
+    expect(u / 1.73e-7).toBeLessThan(2);
+    expect(Math.abs(value)).toBeLessThan(4 * u);
+    expect(result.pretend?.allan[0]?.tau_s).toBeCloseTo(840, 6);
+  });
+
+  test('of two dwells pretends nothing', () => {
+    expect(withoutSwings({ ...still(() => 1e-4), anglesDeg: [near, near, near] }).pretend).toBeNull();
+  });
+});
+
+test.each([
+  [1, 2.922319e-1],
+  [10, 9.159953e-2],
+  [100, 3.241343e-2],
+])('the overlapping Allan deviation of the 1000 points of SP 1065 over %d', (m, expected) => {
+  expect(relativeDifference(allanDeviation(sp1065Uniforms(1000), m), expected)).toBeLessThan(3e-7);
+});
+
+test('the Allan deviation of a straight drift is D m/√2', () => {
+  const drift = Array.from({ length: 64 }, (_, k) => 1e-3 * k);
+  expect(allanDeviation(drift, 10)).toBeCloseTo(7.0710678118655e-3, 14);
+  expect(allanDeviations(drift, 30).map(({ tau_s }) => tau_s)).toEqual([30, 60, 120, 240, 480]);
+});
