@@ -1,5 +1,9 @@
 import { parseArgs } from 'node:util';
 import { NotYetError } from '@/shared/lib/not-yet-error';
+import { adviseNight } from '@/shared/planning/advise-night';
+import { peakExcursionRad } from '@/shared/planning/excursion';
+import { predictU } from '@/shared/planning/plan-uncertainty';
+import { alternatives, cadenceOf, type Alternative } from '@/shared/planning/strategies';
 import { adviseProtocol } from '@/shared/protocol/advise';
 import { checkProtocol } from '@/shared/protocol/check';
 import type { ProtocolDocument } from '@/shared/protocol/document';
@@ -22,17 +26,18 @@ export interface Plan {
   signal_rad: number | null;
   /** The same on the scale, m. */
   signal_m: number | null;
-  relativeU: null;
-  u_by_source: null;
+  /** Of G after the night; null where the rig or the protocol does not tell. */
+  relativeU: number | null;
+  u_by_source: Record<string, number> | null;
   advice: Finding[];
-  bestDwell_s: null;
-  peakExcursion_rad: null;
-  alternatives: null;
+  bestDwell_s: number | null;
+  peakExcursion_rad: number | null;
+  alternatives: Alternative[];
 }
 
 /**
  * Plans a document on a rig.
- * @throws Unusable for a protocol that is refused, NotYetError for a rig whose torque cannot be computed yet.
+ * @throws Unusable for a protocol that is refused.
  */
 export function makePlan(document: ProtocolDocument, rig: RigDocument): Plan {
   const start = { utcMs: startUtcMs, angleDeg: rig.motion?.homeDeg ?? 0 };
@@ -40,16 +45,20 @@ export function makePlan(document: ProtocolDocument, rig: RigDocument): Plan {
   if (refusals.length > 0) throw new Unusable(`The protocol "${document.name}" is refused:\n${listed(refusals)}`);
   const timeline = planTimeline({ protocol: document, rig, timeZone: 'UTC' }, start);
   const signal = predictSignal(rig);
+  const cadence = cadenceOf(timeline, rig);
+  const predicted = cadence === null ? null : predictU(rig, cadence);
+  const others = alternatives(rig, { durationS: timeline.durationS, calibrated: cadence?.calibrated ?? false });
+  const peak = peakExcursionRad(rig, timeline);
   return {
     duration_s: Math.round(timeline.durationS * 1e6) / 1e6,
     signal_rad: signal?.signalRad ?? null,
     signal_m: signal?.signalM ?? null,
-    relativeU: null,
-    u_by_source: null,
-    advice: adviseProtocol(document, rig, start),
-    bestDwell_s: null,
-    peakExcursion_rad: null,
-    alternatives: null,
+    relativeU: predicted?.relativeU ?? null,
+    u_by_source: predicted?.bySource ?? null,
+    advice: [...adviseProtocol(document, rig, start), ...adviseNight(rig, { predicted, peakRad: peak })],
+    bestDwell_s: others.find(({ strategy }) => strategy === 'plain')?.dwell_s ?? null,
+    peakExcursion_rad: peak,
+    alternatives: others,
   };
 }
 

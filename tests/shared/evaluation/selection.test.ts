@@ -139,7 +139,7 @@ describe('what cannot be computed is null', () => {
       ...records,
       steps: records.steps.filter(({ kind }) => kind === 'dwell'),
     }));
-    expect(still.result).toMatchObject({ reversal_rad: null, G: null, pretend: null });
+    expect(still.result).toMatchObject({ reversal_rad: null, G: null });
   });
 
   test('a zero that wanders is not taken for ringing', () => {

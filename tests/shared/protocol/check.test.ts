@@ -214,8 +214,7 @@ describe('what is not built yet is valid in the format and refused as not-yet', 
 
   test.each([
     ['goodWhen', { goodWhen: { residual_urad: 40 } }, 'goodWhen'],
-    ['another method', { evaluation: { method: 'period' as const } }, 'evaluation'],
-    ['another drift removal', { evaluation: { drift: 'gls' as const, order: 2 } }, 'evaluation'],
+    ['another method', { evaluation: { method: 'modulation' as const } }, 'evaluation'],
   ])('%s', (_, more, path) => {
     expect(checkProtocol(protocol([home, dwell], more), demoRigWide)).toEqual([expect.objectContaining({ code: 'not-yet', path })]);
   });

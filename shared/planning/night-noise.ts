@@ -1,0 +1,87 @@
+import { BOLTZMANN_J_K } from '../physics/constants';
+import { oscillatorOf, type Oscillator } from '../physics/oscillator';
+import type { RigDocument } from '../rig/document';
+import { abaDifference } from '../statistics/drift';
+import { offset, ringDownSegment } from '../statistics/ring-down';
+import { at, invertSymmetric, type Matrix } from '../statistics/symmetric';
+import { solveAtFixedAlpha } from '../statistics/variable-projection';
+
+/** What an alternating night of dwells leaves open by its noise (physics.md J1). */
+
+export interface Cadence {
+  /** Dwells, near and far together. */
+  dwells: number;
+  dwellS: number;
+  /** From dwell to dwell, s. */
+  cycleS: number;
+  /** Whether the ringing is told from a calibration, so that each dwell has only its own amplitudes to find. */
+  calibrated: boolean;
+  /** The dwells hold ringing that has to be fitted at all. */
+  rings: boolean;
+}
+
+/** Samples a second, where nobody says otherwise. */
+const usualRateHz = 10;
+const dataPerDwell = 240;
+
+/**
+ * Variance of the fitted centre of one dwell over that of a plain mean of its samples (physics.md C4): columns for drift and ringing cost,
+ * and much more so when ω and γ have to come from the same dwell.
+ */
+export function inflation(oscillator: Oscillator, dwellS: number, { calibrated, rings }: Pick<Cadence, 'calibrated' | 'rings'>): number {
+  if (!rings) return 1;
+  const fit = unitFit(oscillator, dwellS);
+  const segment = fit.segments[0];
+  if (segment === undefined) return Infinity;
+  const known = at(segment.inverseNormal, offset, offset);
+  if (calibrated) return dataPerDwell * known;
+  const shift = segment.shift[offset] as number[];
+  const covariance = invertSymmetric(fit.information);
+  return dataPerDwell * (known + shift.reduce((sum, a, i) => sum + shift.reduce((own, b, j) => own + a * at(covariance, i, j) * b, 0), 0));
+}
+
+/** One dwell that rings with an amplitude of 1. */
+function unitFit({ omegaD, gamma }: Oscillator, dwellS: number) {
+  const tS = Float64Array.from({ length: dataPerDwell }, (_, k) => (dwellS * (k + 0.5)) / dataPerDwell);
+  const y = tS.map((t) => Math.exp(-gamma * t) * Math.cos(omegaD * t));
+  return solveAtFixedAlpha([ringDownSegment({ tS, y })], [omegaD, gamma]);
+}
+
+/** Steady ringing at the start of a dwell when near and far alternate with a step of 1 (physics.md J2). */
+function ringing({ omegaD, gamma }: Oscillator, cycleS: number): number {
+  const decay = Math.exp(-gamma * cycleS);
+  return 1 / Math.hypot(1 + decay * Math.cos(omegaD * cycleS), decay * Math.sin(omegaD * cycleS));
+}
+
+/** Standard uncertainty of near minus far, rad; null where the rig has no measured pendulum. */
+export function differenceU(rig: RigDocument, cadence: Cadence): number | null {
+  const oscillator = oscillatorOf(rig);
+  if (oscillator === null || cadence.dwells < 2 || !(cadence.dwellS > 0)) return null;
+  const { readout_rad: readout = 0, walk_rad_per_sqrt_min: walk = 0, temperature_K: temperature = 0 } = rig.noise ?? {};
+  const { dwellS, cycleS, dwells } = cadence;
+  const { inertiaKgM2, gamma, kappa } = oscillator;
+  const white = (inflation(oscillator, dwellS, cadence) * readout ** 2) / (usualRateHz * dwellS);
+  const thermal = (8 * BOLTZMANN_J_K * temperature * inertiaKgM2 * gamma) / (kappa * kappa) / (2 * dwellS);
+  const wandering = (walk ** 2 / 60) * ((3 * cycleS - 2 * dwellS) / 12);
+  return 2 * Math.sqrt(((white + thermal) * driftCost(dwells) + wandering) / dwells);
+}
+
+/** What ABA windows cost against a plain difference (physics.md D2). */
+function driftCost(dwells: number): number {
+  if (dwells < 3) return 1;
+  const series = Array.from({ length: dwells }, (_, k) => ({ timeS: k, side: k % 2 === 0 ? (1 as const) : (-1 as const), value: 0 }));
+  return (dwells * abaDifference(series).weights.reduce((sum, w) => sum + w * w, 0)) / 4;
+}
+
+/** Standard uncertainties of ω (rad/s) and γ (1/s) that the ringing of the night itself gives; null where there is none. */
+export function ringingU(rig: RigDocument, cadence: Cadence, signalRad: number): { omega: number; gamma: number } | null {
+  const oscillator = oscillatorOf(rig);
+  const readout = rig.noise?.readout_rad ?? 0;
+  if (oscillator === null || !cadence.rings || cadence.dwells < 1) return null;
+  const { information } = unitFit(oscillator, cadence.dwellS);
+  const amplitude = Math.abs(signalRad) * ringing(oscillator, cadence.cycleS);
+  const datum = readout / Math.sqrt((usualRateHz * cadence.dwellS) / dataPerDwell);
+  const scale = (cadence.dwells * amplitude ** 2) / Math.max(datum, 1e-12) ** 2;
+  const covariance: Matrix = invertSymmetric(information.map((row) => row.map((value) => value * scale)));
+  return { omega: Math.sqrt(at(covariance, 0, 0)), gamma: Math.sqrt(at(covariance, 1, 1)) };
+}

@@ -1,0 +1,90 @@
+import { oscillatorOf } from '../physics/oscillator';
+import { swingMove, UnplayableStep } from '../protocol/durations';
+import { sideAt } from '../protocol/stations';
+import type { Timeline } from '../protocol/timeline';
+import type { RigDocument } from '../rig/document';
+import type { Cadence } from './night-noise';
+import { predictU } from './plan-uncertainty';
+
+/** The cadence of a plan, and what other ways of spending the same time would give. */
+
+/** Null where the plan has no reversals. */
+export function cadenceOf({ items }: Pick<Timeline, 'items'>, rig: RigDocument): Cadence | null {
+  const dwells = items.filter(({ kind, angleToDeg }) => kind === 'dwell' && sideAt(rig, angleToDeg) !== null);
+  const first = dwells[0];
+  const last = dwells.at(-1);
+  const sides = new Set(dwells.map(({ angleToDeg }) => sideAt(rig, angleToDeg)));
+  if (first === undefined || last === undefined || sides.size < 2) return null;
+  const total = dwells.reduce((sum, { startUtcMs, endUtcMs }) => sum + (endUtcMs - startUtcMs) / 1000, 0);
+  const between = (last.startUtcMs - first.startUtcMs) / 1000 / Math.max(1, dwells.length - 1);
+  const dwellS = total / dwells.length;
+  return {
+    dwells: dwells.length,
+    dwellS,
+    cycleS: Math.max(dwellS, between),
+    calibrated: items.some(({ kind }) => kind === 'kick'),
+    rings: true,
+  };
+}
+
+export interface Alternative {
+  strategy: 'plain' | 'shaped' | 'wait';
+  dwell_s: number;
+  duration_s: number;
+  relativeU: number;
+}
+
+/** Ringing that has died to this fraction counts as settled. */
+const settledShare = 0.01;
+const mostPeriods = 8;
+
+function swingS(rig: RigDocument): number | null {
+  const [near, far] = [rig.stations.near?.value, rig.stations.far?.value];
+  if (near === undefined || far === undefined) return null;
+  try {
+    return swingMove({ to: 'near' }, rig, far).durationS;
+  } catch (error) {
+    if (error instanceof UnplayableStep) return null;
+    throw error;
+  }
+}
+
+/**
+ * The best of each strategy in the same time: fitting through the ringing at a beat of whole periods, swings in two moves, and waiting
+ * until the ringing has died to a hundredth. Empty where the rig does not tell.
+ */
+export function alternatives(rig: RigDocument, { durationS, calibrated }: { durationS: number; calibrated: boolean }): Alternative[] {
+  const oscillator = oscillatorOf(rig);
+  const moveS = swingS(rig);
+  if (oscillator === null || moveS === null || !(durationS > 0)) return [];
+  const { periodS, gamma } = oscillator;
+  const dead: Record<Alternative['strategy'], number> = {
+    plain: moveS,
+    shaped: moveS + periodS / 2,
+    wait: moveS + Math.log(1 / settledShare) / gamma,
+  };
+  return (Object.keys(dead) as Alternative['strategy'][]).flatMap((strategy) => {
+    const candidates = Array.from({ length: mostPeriods }, (_, k) => k + 1)
+      // One period is too short to tell ω and γ by without a calibration.
+      .filter((periods) => strategy !== 'plain' || calibrated || periods > 1)
+      .flatMap((periods) => {
+        const dwellS =
+          strategy === 'wait' ? periods * periodS : Math.ceil((dead[strategy] + 1) / periodS + periods - 1) * periodS - dead[strategy];
+        const cycleS = dwellS + dead[strategy];
+        const dwells = Math.floor(durationS / cycleS);
+        const found = predictU(rig, {
+          dwells,
+          dwellS,
+          cycleS,
+          calibrated: calibrated || strategy !== 'plain',
+          rings: strategy === 'plain',
+        });
+        return found === null
+          ? []
+          : [{ strategy, dwell_s: dwellS, duration_s: dwells * cycleS, relativeU: found.relativeU, statistics: found.statistics }];
+      });
+    if (candidates.length === 0) return [];
+    const { statistics: _, ...best } = candidates.reduce((a, b) => (b.statistics < a.statistics ? b : a));
+    return [best];
+  });
+}

@@ -1,0 +1,158 @@
+import { differenceU, inflation, type Cadence } from '@/shared/planning/night-noise';
+import { peakExcursionRad } from '@/shared/planning/excursion';
+import { adviseNight } from '@/shared/planning/advise-night';
+import { predictU } from '@/shared/planning/plan-uncertainty';
+import { alternatives, cadenceOf } from '@/shared/planning/strategies';
+import { oscillatorOf, type Oscillator } from '@/shared/physics/oscillator';
+import type { Step } from '@/shared/protocol/document';
+import { planTimeline } from '@/shared/protocol/timeline';
+import { templateById } from '@/shared/protocol/templates';
+import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
+import type { RigDocument } from '@/shared/rig/document';
+import { abaDifference } from '@/shared/statistics/drift';
+import { relativeDifference } from '../../support/check-data';
+import { normalDeviates } from '../../support/lcg';
+
+/** The planner against physics.md C4, F4, J1 to J3, and against simulated series of dwells. */
+
+const oscillator = oscillatorOf(demoRigWide) as Oscillator;
+const withNoise = (readoutPerSecond: number, walk: number): RigDocument => ({
+  ...demoRigWide,
+  noise: { readout_rad: readoutPerSecond * Math.sqrt(10), walk_rad_per_sqrt_min: walk },
+});
+/** Noise of a sample a second; 5 µrad at 10 Hz are 1.6 µrad at 1 Hz. */
+const teaching = withNoise(2e-5, 3e-6);
+const enthusiast = withNoise(5e-6 / Math.sqrt(10), 1e-6);
+const theta = 1.186912843431e-3;
+
+test.each([
+  [0.75, 1.3923017, 137.89838],
+  [1, 1.0199333, 7.9775762],
+  [1.25, 1.0697652, 1.5622456],
+  [1.5, 1.103861, 1.1386665],
+])('what fitting through the ringing costs in a dwell of %d periods (C4)', (periods, known, free) => {
+  const at = (calibrated: boolean) => inflation(oscillator, periods * 420, { calibrated, rings: true });
+  expect(relativeDifference(at(true), known)).toBeLessThan(0.01);
+  expect(relativeDifference(at(false), free)).toBeLessThan(0.06);
+});
+
+test.each<[string, RigDocument, number, number, boolean]>([
+  ['teaching noise', teaching, 20, 4.394e-4, true],
+  ['enthusiast', enthusiast, 20, 1.437e-4, true],
+  ['teaching, swings in two moves', teaching, 230, 6.162e-4, false],
+])('%s: the noise of 12 hours of dwells of 900 s (J3, closed form)', (_name, rig, dead, expected, rings) => {
+  const cycleS = 900 + dead;
+  const cadence: Cadence = { dwells: Math.floor(43200 / cycleS), dwellS: 900, cycleS, calibrated: true, rings };
+  expect(relativeDifference((differenceU(rig, cadence) as number) / (2 * theta), expected)).toBeLessThan(0.03);
+});
+
+describe.each<[string, RigDocument]>([
+  ['teaching', teaching],
+  ['enthusiast', enthusiast],
+  ['white only', withNoise(1e-5, 0)],
+])('simulated series with %s noise', (_name, rig) => {
+  test.each([
+    ['plain', 20, 820],
+    ['shaped', 230, 610],
+    ['wait', 4920, 840],
+  ])('%s: the scatter over nights is what the plan says', (strategy, dead, dwellS) => {
+    const cycleS = dead + dwellS;
+    const dwells = Math.max(4, Math.floor(43200 / cycleS));
+    const cadence: Cadence = { dwells, dwellS, cycleS, calibrated: true, rings: strategy === 'plain' };
+    const normal = normalDeviates(dwells);
+    const { readout_rad: readout = 0, walk_rad_per_sqrt_min: walk = 0 } = rig.noise ?? {};
+    const white = readout * Math.sqrt(inflation(oscillator, dwellS, cadence) / (10 * dwellS));
+    const pieces = 20;
+    const step = walk * Math.sqrt(cycleS / 60 / pieces);
+    const night = () => {
+      let zero = 0;
+      return Array.from({ length: dwells }, (_, k) => {
+        let sum = 0;
+        let count = 0;
+        for (let piece = 0; piece < pieces; piece += 1) {
+          zero += step * normal();
+          if (piece >= (dead / cycleS) * pieces) [sum, count] = [sum + zero, count + 1];
+        }
+        return { timeS: k * cycleS, side: k % 2 === 0 ? (1 as const) : (-1 as const), value: sum / count + white * normal() };
+      });
+    };
+    const values = Array.from({ length: 300 }, () => abaDifference(night()).value);
+    const scatter = Math.sqrt(values.reduce((sum, value) => sum + value * value, 0) / values.length);
+    // 300 nights tell it to 4 %; few dwells are far from the limit of many that the closed form is.
+    expect(scatter / (differenceU(rig, cadence) as number)).toBeGreaterThan(0.8);
+    expect(scatter / (differenceU(rig, cadence) as number)).toBeLessThan(strategy === 'wait' ? 1.5 : 1.2);
+  });
+});
+
+const start = { utcMs: 0, angleDeg: 0 };
+const timelineOf = (rig: RigDocument, steps: Step[]) =>
+  planTimeline({ protocol: { steps }, rig, timeZone: 'UTC' }, { ...start, angleDeg: rig.motion?.homeDeg ?? 0 });
+const reversals = (periods: number, times: number): Step[] => [
+  { kind: 'swing', to: 'near' },
+  {
+    kind: 'repeat',
+    times,
+    steps: (['far', 'near'] as const).flatMap((to): Step[] => [
+      { kind: 'swing', to },
+      { kind: 'dwell', beat_periods: periods },
+    ]),
+  },
+];
+
+describe('a whole night', () => {
+  const nightSteps = templateById('near-far')?.make(demoRigWide).steps ?? [];
+  const cadence = cadenceOf(timelineOf(demoRigWide, nightSteps), demoRigWide) as Cadence;
+
+  test('geometry decides, and by the published amounts (F4)', () => {
+    const { bySource, relativeU } = predictU(demoRigWide, cadence) as NonNullable<ReturnType<typeof predictU>>;
+    expect(relativeDifference(bySource['sources.orbit'] ?? NaN, 0.0037718604)).toBeLessThan(1e-3);
+    expect(relativeDifference(bySource['pendulum.arm'] ?? NaN, 0.0011497145)).toBeLessThan(1e-3);
+    expect(relativeDifference(bySource['sources.mass'] ?? NaN, 6.25e-5)).toBeLessThan(1e-6);
+    expect(relativeDifference(relativeU, Math.hypot(...Object.values(bySource)))).toBeLessThan(1e-12);
+    expect(cadence).toMatchObject({ dwells: 34, calibrated: false });
+    expect(adviseNight(demoRigWide, { predicted: predictU(demoRigWide, cadence), peakRad: 1e-3 })).toEqual([
+      { code: 'geometry-decides', path: null, message: expect.stringContaining('measure sources.orbit better') as string },
+    ]);
+  });
+
+  test('fitting through the ringing beats two moves, and both beat waiting (J3)', () => {
+    const found = alternatives(teaching, { durationS: 43200, calibrated: true });
+    const [plain, shaped, wait] = found.map(({ relativeU }) => relativeU) as [number, number, number];
+    expect(found.map(({ strategy }) => strategy)).toEqual(['plain', 'shaped', 'wait']);
+    expect(plain).toBeLessThan(shaped);
+    expect(shaped).toBeLessThan(wait);
+    // With a calibration one period from swing to swing is best, without one two (J2).
+    expect(((found[0]?.dwell_s ?? 0) + 9.727) / 420).toBeCloseTo(1, 3);
+    const [alone] = alternatives(teaching, { durationS: 43200, calibrated: false });
+    expect(((alone?.dwell_s ?? 0) + 9.727) / 420).toBeCloseTo(2, 3);
+  });
+});
+
+test('swings at one and a half periods pump the pendulum: 2.24 steps of ringing at Q 8 (J2)', () => {
+  const signal = 2 * theta;
+  const whole = peakExcursionRad(demoRigWide, timelineOf(demoRigWide, reversals(2, 8))) as number;
+  const pumped = peakExcursionRad(demoRigWide, timelineOf(demoRigWide, reversals(1.5, 8))) as number;
+  // At a half period after the swing K of the ringing is on the far side of the equilibrium: θ + 0.82 · 2.24 S, or the start itself.
+  expect((pumped - theta) / signal / 0.8214089649912).toBeCloseTo(2.24, 0);
+  expect(whole).toBeLessThan(0.7 * pumped);
+  const tight = { ...demoRigWide, pendulum: { ...demoRigWide.pendulum, travel_rad: pumped } };
+  expect(adviseNight(tight, { predicted: null, peakRad: pumped }).map(({ code }) => code)).toEqual(['excursion']);
+  expect(adviseNight(tight, { predicted: null, peakRad: 0.7 * pumped })).toEqual([]);
+});
+
+test('what cannot be told is null or empty', () => {
+  const unmeasured = { ...demoRigNarrow, measured: undefined };
+  const timeline = timelineOf(demoRigNarrow, reversals(2, 3));
+  expect(peakExcursionRad(unmeasured, timeline)).toBeNull();
+  expect(alternatives(unmeasured, { durationS: 3600, calibrated: false })).toEqual([]);
+  expect(predictU(unmeasured, cadenceOf(timeline, demoRigNarrow) as Cadence)).toBeNull();
+  expect(
+    cadenceOf(
+      timelineOf(demoRigNarrow, [
+        { kind: 'swing', to: 'near' },
+        { kind: 'dwell', for_s: 600 },
+      ]),
+      demoRigNarrow,
+    ),
+  ).toBeNull();
+});
