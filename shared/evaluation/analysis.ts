@@ -37,37 +37,36 @@ const cutShortPeriods = 1.25;
 
 /**
  * Reads the channel, fits all dwells and solves for G. The channel's clock is compared with the log's and put right where the
- * two differ by more than twice the uncertainty; only a difference that the guards about the swings do not cover asks for a second fit.
+ * two differ by more than the guards about the swings cover; a smaller difference does nothing to a fit with free phase (physics.md H2).
  * @throws UnusableArchive, NoSolutionError
  */
 export function analyse(archive: Archive, plan: EvaluationPlan): Analysis {
   const series = archive.readChannel(plan.channel);
-  const first = analyseAt(archive, plan, { series, offsetS: 0 });
+  const first = analyseAt(archive, plan, { series, offsetS: 0, judge: false });
   const coarseS = coarseOffsetS({ archive, ...first });
-  const wayOff = coarseS !== null && Math.abs(coarseS) > greatestUnnoticedS;
-  const near = wayOff ? analyseAt(archive, plan, { series, offsetS: coarseS }) : first;
-  const fine = fineOffset({ archive, ...near });
-  if (fine === null) return { ...near, clockOffset: null };
-  const clockOffset = { value: fine.value + (wayOff ? coarseS : 0), u: fine.u };
-  if (Math.abs(clockOffset.value) <= 2 * clockOffset.u) return { ...(wayOff ? first : near), clockOffset };
-  const better = Math.abs(fine.value) > fitAgainFromS ? analyseAt(archive, plan, { series, offsetS: clockOffset.value }) : near;
-  return { ...better, clockOffset };
+  const wayOffS = coarseS !== null && Math.abs(coarseS) > greatestUnnoticedS ? coarseS : 0;
+  const near = wayOffS === 0 ? first : analyseAt(archive, plan, { series, offsetS: wayOffS, judge: false });
+  const foundS = wayOffS + (fineOffset({ archive, ...near })?.value ?? 0);
+  const offsetS = Math.abs(foundS) > guardedS ? foundS : 0;
+  const last = analyseAt(archive, plan, { series, offsetS, judge: true });
+  const fine = fineOffset({ archive, ...last });
+  return { ...last, clockOffset: fine === null ? null : { value: offsetS + fine.value, u: fine.u } };
 }
+
+/** A coarse offset below this may be none, s; the fine search finds it. */
+const greatestUnnoticedS = 2;
+/** A smaller offset changes nothing: the phase of each dwell is free and its ends are guarded, s. */
+const guardedS = 1;
 
 /** Share of a period in which the acceleration is taken. */
 const accelerationPeriods = 0.6;
 
 const omegaOf = ({ value, u, nu }: Known): Known => ({ value: (2 * Math.PI) / value, u: (2 * Math.PI * u) / value ** 2, nu });
 
-/** A coarse offset below this may be none, s; the fine search finds it. */
-const greatestUnnoticedS = 2;
-/** A smaller offset changes no window that is guarded, s. */
-const fitAgainFromS = 0.02;
-
 function analyseAt(
   archive: Archive,
   plan: EvaluationPlan,
-  { series, offsetS }: { series: ArchivedSeries; offsetS: number },
+  { series, offsetS, judge }: { series: ArchivedSeries; offsetS: number; judge: boolean },
 ): Omit<Analysis, 'clockOffset'> {
   const scale = scaleOf(series.info, archive.rig);
   const measured = measuredOscillator(archive.rig);
@@ -80,12 +79,12 @@ function analyseAt(
   const start = startOf(usable, rough, measured);
   refuseShort(usable, start === null ? null : (2 * Math.PI) / start.omega);
   const fitted = usable.filter(({ window }) => window.why === null);
-  const whole = iterate({ archive, plan, measured, start, samples: fitted }, rough);
+  const whole = iterate({ archive, plan, measured, start, samples: fitted, judge }, rough);
   if (plan.method !== 'acceleration') return { windows, samplesOf, measured, ...whole };
   // The first motion after each swing, by the full step response of a pendulum that the whole dwells tell.
   const begun = fitted.map((one) => beginningOf(one, accelerationPeriods * whole.free.period.value));
   const held: MeasuredOscillator = { omega: omegaOf(whole.free.period), gamma: whole.free.gamma };
-  const early = iterate({ archive, plan, measured: held, start: null, samples: begun }, rough);
+  const early = iterate({ archive, plan, measured: held, start: null, samples: begun, judge }, rough);
   return { windows, samplesOf, measured: held, ...early };
 }
 

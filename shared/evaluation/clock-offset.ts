@@ -147,7 +147,7 @@ export function fineOffset(fitted: Fitted): ClockOffset | null {
     const weight = each.reduce((sum, one) => sum + one.weight, 0);
     if (!(weight > 0)) return null;
     const step = -each.reduce((sum, one) => sum + one.pull, 0) / weight;
-    const scatter = each.reduce((sum, one) => sum + (one.pull + one.weight * step) ** 2, 0);
+    const scatter = scatterOf(each.map((one) => one.pull + one.weight * step));
     offset += step;
     u = Math.sqrt((scatter * each.length) / (each.length - 1)) / weight;
     if (Math.abs(step) < 1e-6) break;
@@ -155,6 +155,13 @@ export function fineOffset(fitted: Fitted): ClockOffset | null {
   return Number.isFinite(offset)
     ? { value: offset, u: Math.hypot(u, profileU[fitted.archive.rig.motion === undefined ? 'guessed' : 'known'], logU(fitted)) }
     : null;
+}
+
+/** Sum of squares, neighbours included where they add: a dwell's error shows in the swing before it and in the one after. */
+function scatterOf(deviations: readonly number[]): number {
+  const squares = deviations.reduce((sum, one) => sum + one * one, 0);
+  const neighbours = deviations.slice(1).reduce((sum, one, k) => sum + one * (deviations[k] as number), 0);
+  return squares + 2 * Math.max(0, neighbours);
 }
 
 /** The log's own uncertainty of its swings' times, of their mean. */

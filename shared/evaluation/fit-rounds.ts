@@ -31,6 +31,8 @@ export interface FitQuestion {
   measured: MeasuredOscillator;
   start: RingDownStart | null;
   samples: readonly DwellSamples[];
+  /** Whether disturbed data are sought and trusted less. */
+  judge: boolean;
 }
 
 export type FitOutcome = Omit<Analysis, 'windows' | 'samplesOf' | 'measured' | 'clockOffset'>;
@@ -64,7 +66,7 @@ export function iterate(question: FitQuestion, rough: ChannelScale): FitOutcome 
     bias: null,
   };
   let best = settle(question, round, averagesOn);
-  for (let judgements = 0; judgements < greatestJudgements; judgements += 1) {
+  for (let judgements = 0; question.judge && judgements < greatestJudgements; judgements += 1) {
     const { outcome, next } = best;
     const disturbances = outcome.found === null ? null : judged(outcome.segments, outcome.found, judgements);
     if (disturbances === null || isAsBefore(disturbances, next.disturbances)) break;
@@ -93,8 +95,8 @@ interface Settled {
 }
 
 /** Huber's weights twice, then the biweight. */
-const greatestJudgements = 8;
-const sameTrust = 0.01;
+const greatestJudgements = 6;
+const sameTrust = 0.05;
 
 function isAsBefore(now: readonly Disturbance[], before: readonly Disturbance[] | null): boolean {
   return (

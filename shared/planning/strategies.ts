@@ -84,7 +84,7 @@ export function alternatives(rig: RigDocument, { durationS, calibrated }: { dura
           : [{ strategy, dwell_s: dwellS, duration_s: dwells * cycleS, relativeU: found.relativeU, statistics: found.statistics }];
       });
     if (candidates.length === 0) return [];
-    const { statistics: _, ...best } = candidates.reduce((a, b) => (b.statistics < a.statistics ? b : a));
-    return [best];
+    const { statistics, ...best } = candidates.reduce((a, b) => (b.statistics < a.statistics ? b : a));
+    return statistics > 0 || best.relativeU > 0 ? [best] : [];
   });
 }
