@@ -1,14 +1,13 @@
 import { mkdtempSync, rmSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import { demoIds } from '@/db/demo/seed';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import { verifyChain } from '@/shared/archive/chain';
 import type { ChainedEvent } from '@/shared/archive/run-records';
-import type { ProtocolDocument } from '@/shared/protocol/document';
 import { withDatabase, type BenchDatabase } from './lib/fresh-database';
 import { LabClient, pause } from './lib/lab-client';
 import { addMembers, seedLab } from './lib/people';
+import { eventsOf, swings } from './lib/swings';
 import { ServerProcess, type ServerSetting } from './lib/server-process';
 import { quantile, report } from './report';
 
@@ -19,39 +18,6 @@ import { quantile, report } from './report';
 
 const kills = 10;
 const longestCalmMs = 8_000;
-
-const swings: ProtocolDocument = {
-  formatVersion: 1,
-  name: 'Swings',
-  onInterruption: 'resume',
-  steps: [
-    { kind: 'home' },
-    {
-      kind: 'repeat',
-      times: 500,
-      steps: [
-        { kind: 'swing', to: 'near' },
-        { kind: 'dwell', for_s: 3 },
-        { kind: 'swing', to: 'far' },
-        { kind: 'dwell', for_s: 3 },
-      ],
-    },
-  ],
-};
-
-async function eventsOf(lab: LabClient, runId: string): Promise<ChainedEvent[]> {
-  const events: ChainedEvent[] = [];
-  for (let cursor: string | null = ''; cursor !== null;) {
-    const after: string = cursor === '' ? '' : `&cursor=${encodeURIComponent(cursor)}`;
-    const page = (await lab.get(`/labs/${demoIds.lab}/runs/${runId}/events?limit=500${after}`)).body as {
-      items: ChainedEvent[];
-      next: string | null;
-    };
-    events.push(...page.items);
-    cursor = page.next;
-  }
-  return events;
-}
 
 /** What the run had told before each kill must stand in the chain, the chain must hold, and each kill must have left its mark. */
 function wrongIn(events: readonly ChainedEvent[], told: readonly ChainedEvent[]): number {

@@ -27,6 +27,7 @@ export async function startCluster(name) {
     data,
     wasRunning: running !== null,
     stop: () => asServer(postgres.bin, ['pg_ctl', '-D', data, '-m', 'fast', '-w', '-t', '30', 'stop']),
+    crash: () => asServer(postgres.bin, ['pg_ctl', '-D', data, '-m', 'immediate', '-w', '-t', '30', 'stop']),
     ensureDatabase: (database) => ensureDatabase(url, database),
   };
 }

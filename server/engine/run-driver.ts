@@ -230,7 +230,7 @@ export class RunDriver {
   private async pump(): Promise<void> {
     this.pumping = true;
     try {
-      for (let item = this.inbox.shift(); item !== undefined; item = this.inbox.shift()) {
+      for (let item = this.inbox.shift(); item !== undefined && !this.closed; item = this.inbox.shift()) {
         if (item === 'beat') this.beat();
         else if (item === 'alive') await this.saveAlive();
         else await this.take(item);

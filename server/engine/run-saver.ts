@@ -84,6 +84,8 @@ export class RunSaver {
    * @throws StaleRunError when another process has driven this run on
    */
   async save(write: RunWrite, { hurried = false } = {}): Promise<boolean> {
+    // Whoever has let go of the run writes nothing more, not even into its journal.
+    if (this.closed) return false;
     if (this.merging && (await this.keep(write))) return !this.closed;
     while (this.merging && !this.closed) await this.pause(HURRIED_MS);
     if (this.closed) return false;

@@ -1,0 +1,87 @@
+import { verifyChain } from '@/shared/archive/chain';
+import { sha256Hex } from '@/server/evaluation/sha256';
+import type { Night } from './night';
+
+/** What must hold on every night; each tells what is wrong, or nothing. They look from outside: at the controller, the database, what people were told. */
+type Check = (night: Night) => string | null;
+
+/** A line takes some milliseconds, and an order that was written before a hold may still be on it. */
+const ON_THE_LINE_MS = 60;
+/** What was under way at the controller when an input opened is over by then. */
+const AFTER_HAZARD_MS = 250;
+
+/** Each command moves at most once, whatever was repeated or restarted. */
+const atMostOnce: Check = ({ world }) => {
+  const tags = world.witness.began.map(({ tag }) => tag);
+  const twice = tags.find((tag, index) => tags.indexOf(tag) !== index);
+  return twice === undefined ? null : `the motion ${twice} began twice`;
+};
+
+/** The step log has every row, each once, and all are closed in the end. */
+const wholeLog: Check = ({ world: { store } }) => {
+  const rows = [...store.rows.values()].sort((a, b) => a.seq - b.seq);
+  const gap = rows.findIndex(({ seq }, index) => seq !== index + 1);
+  if (gap >= 0) return `the row ${gap + 1} is missing`;
+  const open = rows.find(({ outcome }) => outcome === null);
+  if (open !== undefined) return `the row ${open.seq} was never closed`;
+  const began = store.events.filter(({ kind }) => kind === 'step-began').length;
+  return began === rows.length ? null : `${began} steps began in the log, and there are ${rows.length} rows`;
+};
+
+const chainHolds: Check = ({ world: { store } }) => {
+  const verdict = verifyChain(store.events, sha256Hex);
+  return verdict.valid ? null : `the chain does not hold: ${JSON.stringify(verdict)}`;
+};
+
+/** What somebody was told stands in the database in the end, word for word. */
+const nothingLost: Check = ({ world: { store, witness } }) => {
+  const kept = new Map(store.events.map(({ seq, hash }) => [seq, hash]));
+  for (const [seq, hash] of witness.told) if (kept.get(seq) !== hash) return `event ${seq}, which was told, is not in the database`;
+  return null;
+};
+
+/** No order of motion goes out after a stop that was answered, nor after a hold before somebody resumes. */
+const restsAfterHalt: Check = ({ world: { witness } }) => {
+  for (const { kind, atMs } of witness.halts) {
+    const untilMs = kind === 'stop' ? Infinity : (witness.resumes.find((resumeMs) => resumeMs >= atMs) ?? Infinity);
+    const late = witness.ordered.find((order) => order.atMs > atMs + ON_THE_LINE_MS && order.atMs < untilMs);
+    if (late !== undefined)
+      return `the motion ${late.tag} was ordered at ${late.atMs.toFixed(0)} ms, after the ${kind} of ${atMs.toFixed(0)} ms`;
+  }
+  return null;
+};
+
+/** After a restart of the controller, an opened interlock or a lost supply nothing moves before a person resumes. */
+const restsAfterHazard: Check = ({ world: { witness } }) => {
+  for (const { kind, atMs } of witness.hazards) {
+    const untilMs = witness.resumes.find((resumeMs) => resumeMs >= atMs) ?? Infinity;
+    const moved = witness.began.find((motion) => motion.atMs > atMs + AFTER_HAZARD_MS && motion.atMs < untilMs);
+    if (moved !== undefined) return `the motion ${moved.tag} began at ${moved.atMs.toFixed(0)} ms, after ${kind} at ${atMs.toFixed(0)} ms`;
+  }
+  return null;
+};
+
+/** When all is well again a run has decided: it goes on, is held or is over; and the last stop ends it. */
+const comesToAnEnd: Check = ({ healed, world, stoodDeg }) => {
+  if (['interrupted', 'holding', 'stopping', 'starting'].includes(healed)) return `with everything well again the run is still ${healed}`;
+  if (!world.driver.isOver()) return `after the last stop the run is ${world.driver.state().state}`;
+  return stoodDeg[0] === stoodDeg[1] ? null : `the table moved from ${stoodDeg[0]} to ${stoodDeg[1]} deg after the end`;
+};
+
+const checks: Readonly<Record<string, Check>> = {
+  atMostOnce,
+  wholeLog,
+  chainHolds,
+  nothingLost,
+  restsAfterHalt,
+  restsAfterHazard,
+  comesToAnEnd,
+};
+
+/** What is wrong with a night, with all that is needed to look at it again. */
+export function wrongWith(night: Night): string[] {
+  return Object.entries(checks).flatMap(([name, check]) => {
+    const wrong = check(night);
+    return wrong === null ? [] : [`seed ${night.seed} (${night.policy}; ${night.deeds.join('; ')}), ${name}: ${wrong}`];
+  });
+}

@@ -1,0 +1,258 @@
+import { decodeLine } from '@/firmware-protocol/codec';
+import { type ChainHead, emptyChain } from '@/shared/archive/chain';
+import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
+import { motionOf } from '@/shared/protocol/durations';
+import { MemoryJournals } from '@/server/engine/memory-journal';
+import { RigSupervisor } from '@/server/engine/rig-supervisor';
+import type { Arm } from '@/server/engine/run-context';
+import type { RunDriver } from '@/server/engine/run-driver';
+import { VirtualClock } from '@/server/engine/virtual-clock';
+import { sha256Hex } from '@/server/evaluation/sha256';
+import type { Clock } from '@/server/interfaces/clock';
+import { type RunStore, type RunWrite, StaleRunError, type StoredRun } from '@/server/interfaces/run-store';
+import type { TurntableLink } from '@/server/interfaces/turntable-link';
+import { createLink } from '@/server/links/link-driver';
+import { createSimulatedController, type SimulatedController } from '@/server/links/simulated-controller';
+
+/** The engine, link and codec of a server with a turntable, a database and a disk around them, which can all fail. */
+
+const settle = async () => {
+  for (let turn = 0; turn < 12; turn += 1) await null;
+};
+
+/** A database in memory: what is not plain data is lost in it, and it can be away. */
+export class SimulatedStore implements RunStore {
+  readonly events: ChainedEvent[] = [];
+  readonly rows = new Map<number, StepRow>();
+  away = false;
+  /** Asked at each commit; `answer-lost`: stored, and the answer never comes. */
+  onCommit: (when: 'before' | 'after') => void = () => undefined;
+  loseAnswers = 0;
+  private stored: string | null = null;
+
+  constructor(private readonly start: RunStart) {}
+
+  async load(): Promise<StoredRun | null> {
+    if (this.away) throw new Error('the database is away');
+    const kept = this.stored === null ? { snapshot: null, chartVersion: 0 } : (JSON.parse(this.stored) as object);
+    return { start: this.start, ...(kept as { snapshot: unknown; chartVersion: number }), chain: this.head() };
+  }
+
+  async unfinished(): Promise<StoredRun[]> {
+    const run = await this.load();
+    return run === null || this.stored === null ? [] : [run];
+  }
+
+  async commit(write: RunWrite): Promise<void> {
+    this.onCommit('before');
+    if (this.away) throw new Error('the database is away');
+    if (this.head().seq !== write.expectedSeq) throw new StaleRunError(`the chain ends at ${this.head().seq}`);
+    this.events.push(...structuredClone(write.events));
+    for (const row of structuredClone(write.steps)) this.rows.set(row.seq, row);
+    this.stored = JSON.stringify({ snapshot: write.snapshot, chartVersion: write.chartVersion });
+    this.onCommit('after');
+    if (this.loseAnswers === 0) return;
+    this.loseAnswers -= 1;
+    throw new Error('the connection broke before the answer');
+  }
+
+  private head(): ChainHead {
+    return this.events.at(-1) ?? emptyChain;
+  }
+}
+
+/** The wall clock of the server's machine, which may step; durations do not. */
+class SteppingClock implements Clock {
+  stepMs = 0;
+  constructor(private readonly clock: VirtualClock) {}
+  monotonicMs = () => this.clock.monotonicMs();
+  utcMs = () => this.clock.utcMs() + this.stepMs;
+  after = (delayMs: number, task: () => void) => this.clock.after(delayMs, task);
+}
+
+/** What a night left behind, for the checkers; times are true ones, ms since the beginning. */
+export interface Witness {
+  /** Motions that the controller began. */
+  began: { tag: string; atMs: number }[];
+  /** Orders of motion, at their first arrival at the controller. */
+  ordered: { tag: string; atMs: number }[];
+  /** Holds and stops that people were answered. */
+  halts: { kind: 'hold' | 'stop'; atMs: number }[];
+  resumes: number[];
+  hazards: { kind: string; atMs: number }[];
+  /** Events of the log that somebody was told. */
+  told: Map<number, string>;
+  errors: unknown[];
+}
+
+export class World {
+  readonly clock: VirtualClock;
+  readonly machineClock: SteppingClock;
+  readonly store: SimulatedStore;
+  readonly controller: SimulatedController;
+  readonly witness: Witness = { began: [], ordered: [], halts: [], resumes: [], hazards: [], told: new Map(), errors: [] };
+  private readonly journals = new MemoryJournals();
+  private arm: Arm | null;
+  private link: TurntableLink | null = null;
+  private supervisor: RigSupervisor | null = null;
+  private last: RunDriver | null = null;
+  private epoch = 0;
+  /** Sends of the present process, counted down to its death; below 0: it lives. */
+  private dieAtSend = -1;
+
+  constructor(
+    private readonly start: RunStart,
+    { seed, startUtcMs }: { seed: number; startUtcMs: number },
+  ) {
+    this.clock = new VirtualClock(startUtcMs, settle);
+    this.machineClock = new SteppingClock(this.clock);
+    this.store = new SimulatedStore(start);
+    this.arm = start.arm;
+    this.controller = createSimulatedController({
+      ...{ clock: this.clock, rig: motionOf(start.rig), seed },
+      tap: { arrived: (line) => this.noteArrived(line), sent: (line) => this.noteSent(line) },
+    });
+  }
+
+  get nowMs(): number {
+    return this.clock.monotonicMs();
+  }
+
+  /** The driver of the run, or the last one that there was. */
+  get driver(): RunDriver {
+    if (this.last === null) throw new Error('the night has not begun');
+    return this.last;
+  }
+
+  get alive(): boolean {
+    return this.supervisor !== null;
+  }
+
+  async begin(): Promise<void> {
+    const supervisor = this.openServer();
+    await this.clock.advance(3_000);
+    this.follow(supervisor.startRun(this.start));
+  }
+
+  /** As SIGKILL would: nothing more is said or saved. */
+  kill(): void {
+    this.supervisor?.close();
+    void this.link?.close();
+    this.supervisor = null;
+    this.link = null;
+    this.dieAtSend = -1;
+  }
+
+  /** Dies just before the n-th command that it gives to the controller from now. */
+  killAtSend(n: number): void {
+    if (this.alive) this.dieAtSend = n;
+  }
+
+  /** What was to come and has not come yet does not come any more. */
+  heal(): void {
+    this.store.away = false;
+    this.store.loseAnswers = 0;
+    this.store.onCommit = () => undefined;
+    this.dieAtSend = -1;
+  }
+
+  /** The next process, as soon as it finds the database. */
+  async comeBack(): Promise<void> {
+    if (this.alive || this.store.away) return;
+    const supervisor = this.openServer();
+    const { taken } = await supervisor.recover();
+    if (taken[0] !== undefined) this.follow(taken[0]);
+  }
+
+  /** A person asks; it counts from the moment at which it was answered. */
+  halt(kind: 'hold' | 'stop'): void {
+    if (!this.alive) return;
+    const answer = this.driver[kind]('Ben');
+    if (!answer.ok) return;
+    const process = this.epoch;
+    const answered = () => this.epoch === process && this.alive && this.witness.halts.push({ kind, atMs: this.nowMs });
+    if (answer.kept === undefined) answered();
+    else void answer.kept.then((result) => result !== null && answered());
+  }
+
+  /** Somebody has been at the rig and armed it again, then resumes. */
+  resume(): void {
+    if (!this.alive) return;
+    this.arm = this.start.arm;
+    this.witness.resumes.push(this.nowMs);
+    void this.driver.resume('Ben');
+  }
+
+  hazard(kind: 'reset' | 'interlock' | 'supply', lastsMs: number): void {
+    const { controller, clock } = this;
+    this.witness.hazards.push({ kind, atMs: this.nowMs });
+    if (kind === 'reset') return controller.reset('watchdog');
+    if (kind === 'interlock') controller.openInterlock();
+    else controller.loseSupply();
+    clock.after(lastsMs, () => (kind === 'interlock' ? controller.closeInterlock() : controller.returnSupply()));
+  }
+
+  angleDeg(): number {
+    return this.controller.trueAngleDegAt(this.clock.utcMs());
+  }
+
+  private openServer(): RigSupervisor {
+    this.epoch += 1;
+    const link = createLink({
+      factory: this.controller.factory,
+      clock: this.machineClock,
+      rig: motionOf(this.start.rig),
+      epoch: this.epoch,
+    });
+    this.link = link;
+    const send = link.send.bind(link);
+    link.send = (command) => {
+      if (this.link !== link) return;
+      if (this.dieAtSend === 0) return this.kill();
+      if (this.dieAtSend > 0) this.dieAtSend -= 1;
+      send(command);
+    };
+    link.open();
+    this.supervisor = new RigSupervisor({
+      ...{ store: this.store, journals: this.journals, clock: this.machineClock, sha256: sha256Hex },
+      linkOf: () => link,
+      armOf: () => this.arm,
+      guidedBy: () => null,
+      whyDisarmed: () => 'it was ended',
+      lockedBy: () => null,
+      perform: (effect) => {
+        if (effect.kind === 'void-arm') this.arm = null;
+      },
+      onError: (error) => this.witness.errors.push(error),
+    });
+    return this.supervisor;
+  }
+
+  private follow(driver: RunDriver): void {
+    this.last = driver;
+    driver.onChange(({ events }) => {
+      for (const { seq, hash } of events) this.witness.told.set(seq, hash);
+    });
+  }
+
+  private noteArrived(line: string): void {
+    const item = decodeLine(line);
+    if (item.kind !== 'request' || !('tag' in item.order)) return;
+    const { tag } = item.order;
+    if (!this.witness.ordered.some((order) => order.tag === tag)) this.witness.ordered.push({ tag, atMs: this.nowMs });
+  }
+
+  private readonly seen = new Set<string>();
+  private boots = 0;
+
+  private noteSent(line: string): void {
+    const item = decodeLine(line.trimEnd());
+    if (item.kind !== 'event') return;
+    // An event that is read again is the same event.
+    if (item.what.word === 'boot' && !this.seen.has(`${this.boots} ${item.atUs}`)) this.boots += 1;
+    const key = `${this.boots} ${item.number} ${item.atUs}`;
+    if (this.seen.has(key)) return;
+    this.seen.add(key);
+    if (item.what.word === 'began') this.witness.began.push({ tag: item.what.tag, atMs: this.nowMs });
+  }
+}
