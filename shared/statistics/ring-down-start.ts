@@ -1,5 +1,6 @@
 import { boxAverage } from './box-average';
 import { ringDownSegment, type RingDownData } from './ring-down';
+import { robustScale } from './robust';
 import { fitSeparable, residualSumAt, type SeparableSegment } from './variable-projection';
 
 /** A sum of squares of a single damped sine has many valleys, so a fit must start in the right one. */
@@ -13,10 +14,11 @@ export interface RingDownStart {
 const segmentLimit = 5;
 const datumLimit = 160;
 const dampings = [0.005, 0.05, 0.2];
+const valleys = 6;
 
 /**
  * Start values for ω and γ: the residual sum of squares is scanned over frequency and a few dampings on the segments with
- * the greatest scatter, the best valleys are descended, and the lowest wins. A hint (from a measured period, say) is one more candidate.
+ * the greatest scatter, the best valleys are descended, and the lowest wins, by what it leaves of the undisturbed data. A hint (from a measured period, say) is one more candidate.
  * Null when no valley can be descended.
  */
 export function ringDownStart(data: readonly RingDownData[], hint: RingDownStart | null): RingDownStart | null {
@@ -27,15 +29,38 @@ export function ringDownStart(data: readonly RingDownData[], hint: RingDownStart
     frequencies(segments.map(({ spanS, stepS }) => ({ spanS, stepS }))),
   );
   if (hint !== null) candidates.push({ ...hint, ssr: NaN });
-  let best: (RingDownStart & { ssr: number }) | null = null;
-  for (const { omega, gamma } of candidates) {
-    const found = descend(
+  // Faster waves look like slow ones in data that are so far apart.
+  const fastest = Math.max(hint?.omega ?? 0, Math.PI / Math.max(...segments.map(({ stepS }) => stepS)));
+  const found = candidates.flatMap(({ omega, gamma }) => {
+    const one = descend(
       segments.map(({ segment }) => segment),
       { omega, gamma },
+      fastest,
     );
-    if (found !== null && (best === null || found.ssr < best.ssr)) best = found;
-  }
-  return best === null ? null : { omega: best.omega, gamma: best.gamma };
+    return one === null ? [] : [one];
+  });
+  return lowest(found);
+}
+
+/** Residuals beyond this many scales count no more than at it: a disturbance is not to decide. */
+const cutOff = 3;
+
+/**
+ * The lowest valley. A disturbance can be followed closely by a fast wave that dies at once; it leaves most of the data unexplained, so the
+ * valleys are compared by residuals cut off at three times the scale that the best of them leaves.
+ */
+function lowest(found: readonly Descended[]): RingDownStart | null {
+  const scale = Math.min(...found.map(({ residuals }) => robustScale(residuals)));
+  const cost = ({ residuals, ssr }: Descended) =>
+    scale > 0 ? residuals.reduce((sum, value) => sum + Math.min(value * value, (cutOff * scale) ** 2), 0) : ssr;
+  const ranked = found.map((one) => ({ one, cost: cost(one) })).sort((a, b) => a.cost - b.cost || a.one.ssr - b.one.ssr);
+  const best = ranked[0]?.one;
+  return best === undefined ? null : { omega: best.omega, gamma: best.gamma };
+}
+
+interface Descended extends RingDownStart {
+  ssr: number;
+  residuals: Float64Array;
 }
 
 interface ScanSegment {
@@ -82,13 +107,15 @@ function scan(segments: readonly SeparableSegment[], grid: readonly number[]): (
   return profile
     .filter((one, k) => one.ssr <= (profile[k - 1]?.ssr ?? Infinity) && one.ssr <= (profile[k + 1]?.ssr ?? Infinity))
     .sort((a, b) => a.ssr - b.ssr)
-    .slice(0, 3);
+    .slice(0, valleys);
 }
 
-function descend(segments: readonly SeparableSegment[], start: RingDownStart): (RingDownStart & { ssr: number }) | null {
+function descend(segments: readonly SeparableSegment[], start: RingDownStart, fastest: number): Descended | null {
+  const allowed = (alpha: readonly number[]) => isOscillation(alpha) && (alpha[0] as number) <= fastest;
   try {
-    const fit = fitSeparable(segments, [start.omega, start.gamma], { maxIterations: 40, tolerance: 1e-6, allowed: isOscillation });
-    return { omega: fit.alpha[0] as number, gamma: fit.alpha[1] as number, ssr: fit.ssr };
+    const fit = fitSeparable(segments, [start.omega, start.gamma], { maxIterations: 40, tolerance: 1e-6, allowed });
+    const residuals = Float64Array.from(fit.segments.flatMap((one) => [...one.residuals]));
+    return { omega: fit.alpha[0] as number, gamma: fit.alpha[1] as number, ssr: fit.ssr, residuals };
   } catch {
     return null;
   }
