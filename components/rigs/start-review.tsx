@@ -1,12 +1,14 @@
 import { useRouter, type Href } from 'expo-router';
 import { View } from 'react-native';
-import { serverNowIso, useLab, useLabMutation, wordsOf } from '@/components/api';
+import { serverNowIso, useLab, useLabCall, useLabMutation, useSession, wordsOf } from '@/components/api';
 import { Body, Label, Num, Panel, PressAndKeep, ProblemNotice, Section } from '@/components/ui';
+import { reviewStart } from '@/shared/contracts/reviews';
 import type { RigView } from '@/shared/contracts/rigs';
 import { startRun } from '@/shared/contracts/runs';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { formatClock, zoneName } from '@/shared/lib/format-time';
 import { useStartChecks } from './start-check-section';
+import { useReview } from './use-review';
 import { useRefreshRigs } from './use-rig';
 
 export interface StartChoice {
@@ -40,12 +42,14 @@ interface ReviewProps {
 
 function Review({ rig, choice, durationS, finishAt, firstMove }: ReviewProps) {
   const { timeZone } = useLab();
+  const { state } = useSession();
   const facts: readonly (readonly [string, string])[] = [
     ['Rig', `${rig.name}, revision ${rig.revision}`],
     ['Protocol', `${choice.protocolName}, revision ${choice.revision}`],
     ['Mass set', rig.massSets.find(({ id }) => id === choice.massSetId)?.label ?? '–'],
     ['First move', firstMove],
     ['On site', rig.arm === null ? 'nobody: the rig is not armed' : `${rig.arm.name}${rig.arm.note === '' ? '' : `: “${rig.arm.note}”`}`],
+    ['On call', state.kind === 'signed-in' ? `${state.me.user.name}, who starts it` : '–'],
   ];
   return (
     <Panel className="gap-4">
@@ -93,12 +97,25 @@ function StartAct({ rig, choice, mayStart, stale }: StartActProps) {
     router.replace(`/runs/${data.id}` as Href);
   });
   const { protocolId, revision, massSetId, notes } = choice;
-  const send = () => start.mutate({ body: { rigId: rig.id, protocolId, revision, massSetId, notes, tappedAt: serverNowIso() } });
-  const ready = mayStart && massSetId !== '' && !stale;
+  const askReview = useLabCall(reviewStart);
+  const allowed = mayStart && massSetId !== '' && !stale;
+  const chosen = { protocolId, revision, massSetId };
+  const { review, renew } = useReview(
+    JSON.stringify([rig.id, rig.revision, chosen]),
+    async () => (await askReview({ params: { rigId: rig.id }, body: chosen })).data,
+    allowed,
+  );
+  const send = () => {
+    if (review === null) return;
+    const body = { rigId: rig.id, ...chosen, notes, tappedAt: serverNowIso(), reviewToken: review.token };
+    // A token counts once, whatever becomes of the start.
+    start.mutate({ body }, { onError: renew });
+  };
+  const ready = allowed && review !== null;
   return (
     <View className="gap-3">
       {start.isError ? <ProblemNotice title="The run was not started" {...wordsOf(start.error)} /> : null}
-      {ready ? null : (
+      {allowed ? null : (
         <Body tone="dim">
           {stale
             ? 'The checks are old: the server does not answer. Nothing can be started until it does.'

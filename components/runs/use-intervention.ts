@@ -85,12 +85,16 @@ const resumeExpiresMs = 5000;
  * Resumes once. It is never sent again by itself and never waits for a connection.
  * @throws ApiProblem when refused; ApiUnreachable or an abort when there was no answer in 5 s.
  */
-export async function resumeOnce({ labId, runId }: RunAddress): Promise<{ serverAt: string }> {
+export async function resumeOnce({ labId, runId }: RunAddress, reviewToken: string): Promise<{ serverAt: string }> {
   const abort = new AbortController();
   const startedMs = deviceNowMs();
   const timer = setTimeout(() => abort.abort(), resumeExpiresMs);
   try {
-    const { data } = await call(resumeRun, { params: { labId, runId }, body: { tappedAt: serverNowIso() }, signal: abort.signal });
+    const { data } = await call(resumeRun, {
+      params: { labId, runId },
+      body: { tappedAt: serverNowIso(), reviewToken },
+      signal: abort.signal,
+    });
     return data;
   } catch (error) {
     if (deviceNowMs() - startedMs >= resumeExpiresMs) throw new ResumeExpired();

@@ -8,6 +8,7 @@ import { LiveHub } from '../http/live/live-hub';
 import { LineHub } from '../http/live/line-hub';
 import { liveSourceOf, mayStillRead } from '../http/live/live-source';
 import { lineOf } from '../http/line-view';
+import { Reviews } from '../http/reviews';
 import type { Services } from '../http/services';
 import { workEvaluation } from '../http/work/evaluation-job';
 import { rehearsalJobKind, workRehearsal } from '../http/work/rehearsal-job';
@@ -70,8 +71,8 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   const services: Services = {
     ...{ clock, log, database, sessions, access, samples, stations, arms, arming, locks, supervisor, guided, live, lines, newToken },
     config: { ...config, limits: { ...config.limits } },
-    newId: randomUUID,
-    sha256: sha256Hex,
+    ...{ newId: randomUUID, sha256: sha256Hex },
+    reviews: new Reviews({ clock, newToken }),
     idempotency: createIdempotency(database.db, nowUtcMs),
     mail: overrides.mail ?? noMail,
     activeRuns: new ActiveRuns({ supervisor, live }),

@@ -129,6 +129,23 @@ export function withDatabase(facts: RunFacts, awaySinceUtcMs: number | null): Ru
   return { ...facts, reason: `${facts.reason} ${away}`.trim() };
 }
 
+export interface ResumePlan {
+  /** Dwells still to come, one that is begun anew included. */
+  dwellsLeft: number;
+  finishUtcMs: number;
+}
+
+/** What is left if a held run is resumed now; null while it is not held. */
+export function resumePlan(start: RunStart, { state, context }: RunSnapshot, nowUtcMs: number): ResumePlan | null {
+  if (state !== 'held') return null;
+  const { step } = context;
+  let dwellsLeft = step?.broken === true && step.row.kind === 'dwell' ? 1 : 0;
+  const eachStep = (path: string) => {
+    if (path.split('.').at(-1) === 'dwell') dwellsLeft += 1;
+  };
+  return { finishUtcMs: predictEndUtcMs(start, context, { nowUtcMs, eachStep }), dwellsLeft };
+}
+
 /** Dwells of the plan as it stood at the start. */
 export function plannedDwells(start: RunStart, fromUtcMs: number): number {
   return planTimeline(start, { utcMs: fromUtcMs, angleDeg: start.rig.motion?.homeDeg ?? 0 }).dwells;

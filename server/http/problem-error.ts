@@ -31,6 +31,7 @@ export const problemTitles: Record<ProblemCode, string> = {
   'not-found': 'There is no such thing',
   'rig-busy': 'The rig is busy',
   'not-armed': 'The rig is not armed',
+  'not-reviewed': 'The review does not count',
   'not-signed': 'The cautions are not signed',
   locked: 'Somebody has hands in the rig',
   'not-ready': 'The rig is not ready',

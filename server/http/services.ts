@@ -17,6 +17,7 @@ import type { AccessDirectory } from './access-directory';
 import type { ActiveRuns } from './active-runs';
 import type { LineHub } from './live/line-hub';
 import type { LiveHub } from './live/live-hub';
+import type { Reviews } from './reviews';
 
 /** Everything a route may use; built once by `server/boot/build-server.ts`. */
 export interface Services {
@@ -42,6 +43,7 @@ export interface Services {
   supervisor: RigSupervisor;
   guided: GuidedMoves;
   activeRuns: ActiveRuns;
+  reviews: Reviews;
   live: LiveHub;
   lines: LineHub;
   tasks: HeavyTasks;

@@ -4,6 +4,7 @@ import * as evaluations from './evaluations';
 import * as link from './link';
 import * as people from './people';
 import * as protocols from './protocols';
+import * as reviews from './reviews';
 import * as rigs from './rigs';
 import type { RouteContract } from './route';
 import * as runs from './runs';
@@ -21,6 +22,7 @@ export const routes: readonly RouteContract[] = [
   rigs,
   standing,
   link,
+  reviews,
   protocols,
   runs,
   schedules,

@@ -12,6 +12,7 @@ export const problemCodes = {
   'rig-busy': 409,
   'not-armed': 409,
   'not-signed': 409,
+  'not-reviewed': 409,
   locked: 409,
   'not-ready': 409,
   'not-possible-now': 409,

@@ -135,10 +135,14 @@ export type LiveMessages = { [K in keyof typeof liveMessageSchemas]: z.infer<(ty
 
 const labRuns = '/labs/:labId/runs';
 const path = `${labRuns}/:runId` as const;
-const command = z.strictObject({
-  /** When the tap was made, by the phone's clock corrected to the server's: resume and start expire 5 s after it. */
-  tappedAt: instantSchema.optional(),
-});
+const command = z.strictObject({ tappedAt: instantSchema.optional() });
+/** Of what sets masses in motion. */
+const motionFields = {
+  /** When the tap was made, by the phone's clock corrected to the server's: the act expires 5 s after it. */
+  tappedAt: instantSchema,
+  /** Of the review that was confirmed; counts once, for 30 s. */
+  reviewToken: z.string().max(200),
+};
 const accepted = z.strictObject({ runId: idSchema, serverAt: instantSchema });
 
 export const listRuns = defineRoute({
@@ -166,7 +170,7 @@ export const startRun = defineRoute({
     revision: z.number().int().positive(),
     massSetId: idSchema,
     notes: z.string().max(5000).default(''),
-    tappedAt: instantSchema.optional(),
+    ...motionFields,
   }),
   response: runSummarySchema,
   problems: [
@@ -175,6 +179,7 @@ export const startRun = defineRoute({
     'rig-busy',
     'not-armed',
     'not-signed',
+    'not-reviewed',
     'locked',
     'not-ready',
     'protocol-refused',
@@ -223,7 +228,7 @@ const intervention = <L extends string>(
     idempotent: true,
     body: command,
     response: accepted,
-    problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'locked', 'key-reused', 'still-running'],
+    problems: ['invalid-input', 'not-found', 'not-possible-now', 'key-reused', 'still-running'],
   });
 export const holdRun = intervention('hold', {
   name: 'holdRun',
@@ -235,7 +240,11 @@ export const holdAfterDwell = intervention('hold-after-dwell', {
   summary: 'Hold when the present dwell has ended',
   access: 'run.hold',
 });
-export const resumeRun = intervention('resume', { name: 'resumeRun', summary: 'Resume a held run', access: 'run.resume' });
+export const resumeRun = defineRoute({
+  ...intervention('resume', { name: 'resumeRun', summary: 'Resume a held run, reviewed', access: 'run.resume' }),
+  body: z.strictObject(motionFields),
+  problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'not-reviewed', 'locked', 'key-reused', 'still-running'],
+});
 export const stopRun = intervention('stop', { name: 'stopRun', summary: 'Stop: decelerate and end the run', access: 'run.stop' });
 export const liveRun = defineRoute({
   name: 'liveRun',

@@ -9,6 +9,7 @@ import { MemoryJournals } from '@/server/engine/memory-journal';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import type { RigStation, StationRig } from '@/server/interfaces/rig-stations';
 import type { ServerConfig } from '@/server/interfaces/server-config';
+import { resumeSubject, startSubject } from '@/server/http/reviews';
 import { createSimulatedController, type SimulatedController } from '@/server/links/simulated-controller';
 import type { Role } from '@/shared/contracts/roles';
 import type { RunState, RunView } from '@/shared/contracts/runs';
@@ -198,13 +199,9 @@ export class LabServer {
 
   /** Asks to start the first revision of a protocol on the demo rig. */
   askStart(protocolId: string, change: object = {}): request.Test {
-    return this.as('operator', 'POST', `/labs/${demoIds.lab}/runs`).send({
-      rigId: demoIds.rig,
-      protocolId,
-      revision: 1,
-      massSetId: demoIds.massSet,
-      ...change,
-    });
+    const fresh = { tappedAt: this.nowIso(), reviewToken: this.startToken(protocolId) };
+    const body = { rigId: demoIds.rig, protocolId, revision: 1, massSetId: demoIds.massSet, ...fresh, ...change };
+    return this.as('operator', 'POST', `/labs/${demoIds.lab}/runs`).send(body);
   }
 
   /** Arms the rig and starts a run of a new protocol. Returns the id of the run. */
@@ -234,8 +231,24 @@ export class LabServer {
     what: 'hold' | 'hold-after-dwell' | 'resume' | 'stop',
     by: { who?: Role; tappedAt?: string } = {},
   ): request.Test {
-    const { who = 'operator', ...body } = by;
+    const { who = 'operator', ...rest } = by;
+    const body = what === 'resume' ? { tappedAt: this.nowIso(), reviewToken: this.resumeToken(runId, who), ...rest } : rest;
     return this.as(who, 'POST', `/labs/${demoIds.lab}/runs/${runId}/${what}`).send(body);
+  }
+
+  /** What the operator's review of a start of the first revision gives. */
+  startToken(protocolId: string): string {
+    const subject = startSubject({ protocolId, revision: 1, massSetId: demoIds.massSet });
+    return this.services.reviews.issue({ userId: userIdOf('operator'), rigId: demoIds.rig, subject }).token;
+  }
+
+  /** What the review of a resume gives; the tests of the review ask for it over HTTP. */
+  private resumeToken(runId: string, who: Role): string {
+    return this.services.reviews.issue({ userId: userIdOf(who), rigId: demoIds.rig, subject: resumeSubject(runId) }).token;
+  }
+
+  nowIso(): string {
+    return new Date(this.clock.utcMs()).toISOString();
   }
 
   /** Signs the cautions of a rig as everybody who may set it in motion. */
@@ -271,6 +284,8 @@ export class LabServer {
     if (arms.armOf(rigId) === null) throw new Error(`the rig is not armed: ${arms.endedOf(rigId)?.why ?? 'it says nothing'}`);
   }
 }
+
+const userIdOf = (role: Role): string => demoPeople.find((one) => one.role === role)?.id ?? '';
 
 /** Home, then near and far for half a minute each: over in a few minutes. */
 export const quickProtocol = (change: Partial<ProtocolDocument> = {}): ProtocolDocument => ({

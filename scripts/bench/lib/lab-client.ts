@@ -62,8 +62,13 @@ export class LabClient {
 
   /** Starts the first revision of a protocol on the demo rig as soon as the server lets it, and waits until it runs. Returns the run's id. */
   async start(protocolId: string): Promise<string> {
-    const body = { rigId: demoIds.rig, protocolId, revision: 1, massSetId: demoIds.massSet };
-    const { id } = (await this.patiently('a start', () => this.post(runs, body))).body as { id: string };
+    const choice = { protocolId, revision: 1, massSetId: demoIds.massSet };
+    const start = async () => {
+      const review = await this.post(`/labs/${demoIds.lab}/rigs/${demoIds.rig}/start-review`, choice);
+      const { token: reviewToken } = review.body as { token: string };
+      return this.post(runs, { rigId: demoIds.rig, ...choice, reviewToken, tappedAt: new Date().toISOString() });
+    };
+    const { id } = (await this.patiently('a start', start)).body as { id: string };
     await this.until(id, ({ state }) => state === 'running');
     return id;
   }

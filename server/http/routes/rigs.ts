@@ -72,7 +72,10 @@ const rigRouteList = [
       return true;
     });
     const rig = await load(context, before.id);
-    if (done) await services.stations.put(rig);
+    if (done) {
+      services.reviews.drop(rig.id);
+      await services.stations.put(rig);
+    }
     if (rig.document.motion !== undefined) services.guided.revised(rig.id, rig.document.motion);
     context.setEtag(rigTag(context.services, rig));
     return rigViewOf(services, rig);

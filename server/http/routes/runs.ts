@@ -1,4 +1,5 @@
 import type { Response } from 'express';
+import * as reviewContracts from '@/shared/contracts/reviews';
 import * as contracts from '@/shared/contracts/runs';
 import { stepsCsv } from '@/shared/archive/step-csv';
 import type { RunDriver } from '@/server/engine/run-driver';
@@ -14,6 +15,7 @@ import { isoOf } from '../maker';
 import { decodeCursor, pageFrom } from '../paging';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
+import { resumeSubject, startSubject } from '../reviews';
 import { runSummaryOf, storedRunView } from '../run-view';
 import type { Services } from '../services';
 
@@ -40,13 +42,14 @@ const startRoutes = [
   mount(contracts.startRun, async (context) => {
     const { body, membership, services } = context;
     const { db } = services.database;
-    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'start');
     const rig = await findRig(db, membership.labId, body.rigId);
     if (rig === null) throw notFound('rig');
     const revision = await findRevision(db, { labId: membership.labId, protocolId: body.protocolId }, body.revision);
     if (revision === null) throw notFound('protocol revision');
     const massSet = await findMassSet(db, { labId: membership.labId, rigId: rig.id }, body.massSetId);
     if (massSet === null) throw notFound('mass set');
+    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'start');
+    services.reviews.take(body.reviewToken, { userId: context.me.userId, rigId: rig.id, subject: startSubject(body) });
     const run = await beginRun(context, {
       rig,
       protocolId: body.protocolId,
@@ -127,6 +130,28 @@ async function accepted({ clock }: Services, runId: string, answer: Answer): Pro
   return { runId, serverAt: isoOf(answer.serverAtUtcMs) };
 }
 
+const reviewRoutes = [
+  mount(reviewContracts.reviewStart, async ({ params, body, me, membership, services }) => {
+    const { db } = services.database;
+    const rig = await findRig(db, membership.labId, params.rigId);
+    if (rig === null) throw notFound('rig');
+    if ((await findRevision(db, { labId: membership.labId, protocolId: body.protocolId }, body.revision)) === null)
+      throw notFound('protocol revision');
+    if ((await findMassSet(db, { labId: membership.labId, rigId: rig.id }, body.massSetId)) === null) throw notFound('mass set');
+    const { token, expiresUtcMs } = services.reviews.issue({ userId: me.userId, rigId: rig.id, subject: startSubject(body) });
+    return { token, expiresAt: isoOf(expiresUtcMs) };
+  }),
+
+  mount(reviewContracts.reviewResume, async ({ params, me, membership, services }) => {
+    const driver = await driverOf(services, membership.labId, params.runId);
+    const plan = driver.planFromHere();
+    if (plan === null) throw new ProblemError('not-possible-now', 'The run is not held, so there is nothing to resume.');
+    const rigId = services.activeRuns.find(membership.labId, params.runId)?.run.rigId ?? '';
+    const { token, expiresUtcMs } = services.reviews.issue({ userId: me.userId, rigId, subject: resumeSubject(params.runId) });
+    return { token, expiresAt: isoOf(expiresUtcMs), dwellsLeft: plan.dwellsLeft, finishAt: isoOf(plan.finishUtcMs) };
+  }),
+];
+
 const interventionRoutes = [
   mount(contracts.holdRun, async (context) => {
     const { params, me, membership, services } = context;
@@ -144,9 +169,11 @@ const interventionRoutes = [
 
   mount(contracts.resumeRun, async (context) => {
     const { params, body, me, membership, services } = context;
-    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'resume');
     const driver = await driverOf(services, membership.labId, params.runId);
+    // After the waiting for a server that has just begun: what grew old meanwhile moves nothing.
+    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'resume');
     const { rigId } = (services.activeRuns.find(membership.labId, params.runId) ?? { run: { rigId: '' } }).run;
+    services.reviews.take(body.reviewToken, { userId: me.userId, rigId, subject: resumeSubject(params.runId) });
     const answer = await driver.resume(me.name);
     if (!answer.ok) {
       const locked = services.locks.lockedBy(rigId) !== null;
@@ -225,4 +252,4 @@ const recordRoutes = [
   }),
 ];
 
-export const runRoutes = [...startRoutes, ...interventionRoutes, ...recordRoutes];
+export const runRoutes = [...startRoutes, ...reviewRoutes, ...interventionRoutes, ...recordRoutes];

@@ -95,6 +95,10 @@ async function open(options: { armed: boolean; locks?: LockView[] }): Promise<Fa
       firstMove: 'Home: up to 20° at 0.6°/s.',
     },
   }));
+  lab.on('POST /labs/lab-1/rigs/rig-1/start-review', () => ({
+    status: 201,
+    body: { token: `token-${lab.requests('POST /labs/lab-1/rigs/rig-1/start-review').length}`, expiresAt: '2031-03-13T21:00:30Z' },
+  }));
   params['rigId'] = 'rig-1';
   went.length = 0;
   await showInLab(<Page />);
@@ -151,6 +155,7 @@ test('a start is sent once, with the time of the tap, and leads to the run', asy
     revision: 7,
     massSetId: 'm1',
     tappedAt: expect.stringMatching(/^2031-03-13T21:00:0/),
+    reviewToken: 'token-1',
   });
   expect(sent(lab)[0]?.headers.get('idempotency-key')).toMatch(/^[0-9a-f]{32}$/);
   expect(went).toEqual(['/runs/run-1']);
@@ -182,4 +187,13 @@ test('a personal lock stands large above everything', async () => {
   await open({ armed: false, locks: [{ id: 'l1', userId: 'u7', name: 'Anna Fellstone', note: '', since }] });
   expect(screen.getByTestId('locked-notice').textContent).toBe('Anna Fellstone has hands in the rig. Nothing moves.');
   expect(screen.getByTestId('locked-notice').getAttribute('role')).toBe('alert');
+});
+
+test('a review that grows old is made anew, and none is made while nothing may be started', async () => {
+  const lab = await open({ armed: true });
+  lab.on('POST /labs/lab-1/runs', () => ({ status: 201, body: run }));
+  await wait(21_000);
+  await startBySwitch();
+  expect((sent(lab)[0]?.body as { reviewToken: string }).reviewToken).toBe('token-2');
+  expect(lab.requests('POST /labs/lab-1/rigs/rig-1/start-review')[0]?.body).toEqual({ protocolId: 'p1', revision: 7, massSetId: 'm1' });
 });

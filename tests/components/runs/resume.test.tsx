@@ -10,7 +10,7 @@ let answer: (init: RequestInit) => Promise<Response>;
 function Resume() {
   const [said, setSaid] = useState('nothing');
   const resume = () => {
-    resumeOnce({ labId: 'lab-1', runId: 'run-1' }).then(
+    resumeOnce({ labId: 'lab-1', runId: 'run-1' }, 'token-1').then(
       () => setSaid('accepted'),
       (error: unknown) => setSaid(error instanceof ResumeExpired ? 'expired' : 'failed'),
     );
@@ -58,6 +58,6 @@ test('an answer that does not come in 5 s is no longer waited for, and the reque
 test('carries the time of the tap and does not outlive the page', async () => {
   answer = () => Promise.reject(new TypeError('network'));
   await tapAndWait(10);
-  expect(JSON.parse(String(requests[0]?.body))).toEqual({ tappedAt: '2031-03-14T01:00:00.000Z' });
+  expect(JSON.parse(String(requests[0]?.body))).toEqual({ tappedAt: '2031-03-14T01:00:00.000Z', reviewToken: 'token-1' });
   expect(requests[0]?.keepalive).toBe(false);
 });

@@ -46,6 +46,7 @@ const run = ({ labId, runId }: Things) => ({ labId, runId });
 const protocol = ({ labId, protocolId }: Things) => ({ labId, protocolId });
 const file = ({ labId, importId }: Things) => ({ labId, importId });
 const nobody = randomUUID();
+const tapped = { tappedAt: '2031-02-14T20:00:00Z', reviewToken: 'none' };
 
 /** One row for every route of the API; a route without a row fails the test of the matrix. */
 export const rows: Readonly<Record<string, Row>> = {
@@ -110,12 +111,18 @@ export const rows: Readonly<Record<string, Row>> = {
   issueRevision: { params: protocol, body: ({ rigId }) => ({ rigId }), ifMatch: ({ protocolEtag }) => protocolEtag, allowed: 409 },
   getRevision: { params: (things) => ({ ...protocol(things), revision: '1' }), allowed: 200 },
   listRuns: { params: lab, allowed: 200 },
-  startRun: { params: lab, body: ({ rigId, protocolId, massSetId }) => ({ rigId, protocolId, revision: 1, massSetId }), allowed: 409 },
+  startRun: {
+    params: lab,
+    body: ({ rigId, protocolId, massSetId }) => ({ rigId, protocolId, revision: 1, massSetId, ...tapped }),
+    allowed: 409,
+  },
   rehearse: { params: lab, body: ({ rigId, protocolId }) => ({ rigId, protocolId, revision: 1 }), allowed: 202 },
   getRun: { params: run, allowed: 200 },
   holdRun: { params: run, body: () => ({}), allowed: 409 },
   holdAfterDwell: { params: run, body: () => ({}), allowed: 409 },
-  resumeRun: { params: run, body: () => ({}), allowed: 409 },
+  resumeRun: { params: run, body: () => tapped, allowed: 409 },
+  reviewStart: { params: rig, body: ({ protocolId, massSetId }) => ({ protocolId, revision: 1, massSetId }), allowed: 201 },
+  reviewResume: { params: run, allowed: 409 },
   stopRun: { params: run, body: () => ({}), allowed: 409 },
   liveRun: { params: run, allowed: 200 },
   listSteps: { params: run, allowed: 200 },

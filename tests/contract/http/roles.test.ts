@@ -177,7 +177,8 @@ describe.each(cases)('%s', (_name, contract) => {
 });
 
 test('things of another lab named in a body are unknown', async () => {
-  const start = { rigId: own.rigId, protocolId: own.protocolId, revision: 1, massSetId: own.massSetId };
+  const tap = { tappedAt: new Date(lab.clock.utcMs()).toISOString(), reviewToken: 'none' };
+  const start = { rigId: own.rigId, protocolId: own.protocolId, revision: 1, massSetId: own.massSetId, ...tap };
   for (const change of [{ rigId: foreign.rigId }, { protocolId: foreign.protocolId }, { massSetId: foreign.massSetId }]) {
     const answer = await lab.as('owner', 'POST', `/labs/${own.labId}/runs`).send({ ...start, ...change });
     expectProblem(answer, 'not-found');

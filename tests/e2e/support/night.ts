@@ -34,10 +34,7 @@ export async function issued(lab: Lab, document: ProtocolDocument): Promise<{ pr
 
 /** Starts an issued protocol on the armed demo rig. */
 export async function started(lab: Lab, protocol: { protocolId: string; revision: number }): Promise<string> {
-  const run = await lab.server
-    .as('operator', 'POST', `${base}/runs`)
-    .send({ rigId: demoIds.rig, massSetId: demoIds.massSet, ...protocol })
-    .expect(201);
+  const run = await lab.server.askStart(protocol.protocolId, { revision: protocol.revision }).expect(201);
   return String(run.body.id);
 }
 

@@ -77,7 +77,8 @@ describe('a start', () => {
   test('repeated with the same key gives the first answer', async () => {
     const protocolId = await lab.issue(quickProtocol());
     await lab.arm();
-    const ask = () => lab.askStart(protocolId).set('Idempotency-Key', 'one-tap');
+    const tap = { tappedAt: iso(0), reviewToken: lab.startToken(protocolId) };
+    const ask = () => lab.askStart(protocolId, tap).set('Idempotency-Key', 'one-tap');
     const first = await ask().expect(201);
     expect((await ask().expect(201)).body).toEqual(first.body);
     expect((await lab.as('viewer', 'GET', `${runs}?active=true`)).body.items).toHaveLength(1);
@@ -212,14 +213,21 @@ describe('a run', () => {
 
   test('that was disarmed cannot be resumed until somebody on site arms the rig again', async () => {
     const runId = await lab.run(quickProtocol());
-    await lab.advance(30_000);
+    await lab.advance(3_600_000, () => lab.services.supervisor.driverOf(runId)?.facts().current?.kind === 'dwell');
     await lab.intervene(runId, 'hold').expect(202);
     await lab.until(runId, 'held');
     await lab.as('operator', 'DELETE', `/labs/${demoIds.lab}/rigs/${demoIds.rig}/arm`).expect(204);
     expect((await lab.intervene(runId, 'resume').expect(409)).body.code).toBe('not-armed');
     await lab.arm();
+    const review = await lab.as('operator', 'POST', `${runs}/${runId}/resume-review`).expect(201);
+    // The first dwell of 30 s is begun anew, then a swing and the second one.
+    expect(review.body.dwellsLeft).toBe(2);
+    const leftS = (Date.parse(review.body.finishAt) - lab.clock.utcMs()) / 1000;
+    expect(leftS).toBeGreaterThan(60);
+    expect(leftS).toBeLessThan(120);
     await lab.intervene(runId, 'resume').expect(202);
     await lab.until(runId, 'finished');
+    expect(Math.abs(Date.parse((await lab.view(runId)).endedAt ?? '') - Date.parse(review.body.finishAt))).toBeLessThan(2_000);
   });
 
   test('whose interlock opens is held, its arm is void', async () => {

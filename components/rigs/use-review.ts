@@ -1,0 +1,52 @@
+import { useEffect, useState } from 'react';
+
+/** A review counts for 30 s on the server; a page that stays open asks for a fresh one in time. */
+const renewMs = 20_000;
+const retryMs = 3_000;
+
+interface Held<T> {
+  of: string;
+  review: T;
+}
+
+/**
+ * Keeps a review that counts while `on`: asked for when what is reviewed changes, and again before it grows old.
+ * @param of names what is reviewed; another name is another review
+ */
+export function useReview<T>(of: string, ask: () => Promise<T>, on: boolean): { review: T | null; renew: () => void } {
+  const [held, setHeld] = useState<Held<T> | null>(null);
+  const [turn, setTurn] = useState(0);
+  useEffect(() => {
+    if (!on) return undefined;
+    let over = false;
+    let timer: ReturnType<typeof setTimeout> | undefined;
+    const again = (ms: number) => {
+      timer = setTimeout(() => setTurn((before) => before + 1), ms);
+    };
+    ask().then(
+      (review) => {
+        if (over) return;
+        setHeld({ of, review });
+        again(renewMs);
+      },
+      () => {
+        if (over) return;
+        setHeld(null);
+        again(retryMs);
+      },
+    );
+    return () => {
+      over = true;
+      clearTimeout(timer);
+    };
+    // `ask` is another function at each drawing; what it asks for is named by `of`.
+    // eslint-disable-next-line react-hooks/exhaustive-deps
+  }, [of, on, turn]);
+  return {
+    review: on && held?.of === of ? held.review : null,
+    renew: () => {
+      setHeld(null);
+      setTurn((before) => before + 1);
+    },
+  };
+}

@@ -1,0 +1,34 @@
+import { demoIds } from '@/db/demo/seed';
+import { databaseOfThisFile } from '@/tests/support/database';
+import { LabServer, quickProtocol } from '@/tests/support/lab-server';
+
+const database = databaseOfThisFile();
+let lab: LabServer;
+beforeAll(async () => {
+  lab = await LabServer.start(database());
+}, 60_000);
+afterAll(() => lab.stop());
+jest.setTimeout(30_000);
+
+describe('a start', () => {
+  test('needs a review: its token counts once, for what was reviewed, for 30 s', async () => {
+    const protocolId = await lab.issue(quickProtocol());
+    await lab.arm();
+    const choice = { protocolId, revision: 1, massSetId: demoIds.massSet };
+    const review = (who: 'operator' | 'keeper' = 'operator') =>
+      lab.as(who, 'POST', `/labs/${demoIds.lab}/rigs/${demoIds.rig}/start-review`).send(choice).expect(201);
+    const first = (await review()).body as { token: string; expiresAt: string };
+    expect((Date.parse(first.expiresAt) - lab.clock.utcMs()) / 1000).toBeCloseTo(30, 1);
+    await lab.advance(31_000);
+    expect((await lab.askStart(protocolId, { reviewToken: first.token }).expect(409)).body.code).toBe('not-reviewed');
+    // Another person's review, and one of another choice, count for nothing.
+    const others = (await review('keeper')).body.token as string;
+    expect((await lab.askStart(protocolId, { reviewToken: others }).expect(409)).body.detail).toContain('not what was asked for');
+    const another = lab.startToken(await lab.issue(quickProtocol({ name: 'Another' })));
+    expect((await lab.askStart(protocolId, { reviewToken: another }).expect(409)).body.code).toBe('not-reviewed');
+    const token = (await review()).body.token as string;
+    await lab.askStart(protocolId, { reviewToken: token }).expect(201);
+    expect((await lab.askStart(protocolId, { reviewToken: token }).expect(409)).body.code).toBe('not-reviewed');
+    expect((await lab.askStart(protocolId, { reviewToken: undefined }).expect(400)).body.errors[0].path).toBe('reviewToken');
+  });
+});
