@@ -1,4 +1,4 @@
-import { useEffect, useState } from 'react';
+import { useEffect, useRef, useState } from 'react';
 
 /** A review counts for 30 s on the server; a page that stays open asks for a fresh one in time. */
 const renewMs = 20_000;
@@ -16,6 +16,11 @@ interface Held<T> {
 export function useReview<T>(of: string, ask: () => Promise<T>, on: boolean): { review: T | null; renew: () => void } {
   const [held, setHeld] = useState<Held<T> | null>(null);
   const [turn, setTurn] = useState(0);
+  // Another function at each drawing; what it asks for is named by `of`.
+  const newest = useRef(ask);
+  useEffect(() => {
+    newest.current = ask;
+  });
   useEffect(() => {
     if (!on) return undefined;
     let over = false;
@@ -23,7 +28,7 @@ export function useReview<T>(of: string, ask: () => Promise<T>, on: boolean): { 
     const again = (ms: number) => {
       timer = setTimeout(() => setTurn((before) => before + 1), ms);
     };
-    ask().then(
+    newest.current().then(
       (review) => {
         if (over) return;
         setHeld({ of, review });
@@ -39,8 +44,6 @@ export function useReview<T>(of: string, ask: () => Promise<T>, on: boolean): { 
       over = true;
       clearTimeout(timer);
     };
-    // `ask` is another function at each drawing; what it asks for is named by `of`.
-    // eslint-disable-next-line react-hooks/exhaustive-deps
   }, [of, on, turn]);
   return {
     review: on && held?.of === of ? held.review : null,

@@ -7,17 +7,7 @@ import { chained } from './chained';
 import { beginRun, deadlineOf, isArmExpected, isRunOver, isUnderWay, wantsMotion } from './chart';
 import { type Advance, CHART_VERSION, type Effect, type RunEvent, type RunSnapshot } from './run-context';
 import { advanceSafely } from './advance-safely';
-import {
-  createPredictor,
-  factsOf,
-  mayResume,
-  plannedDwells,
-  type ResumePlan,
-  resumePlan,
-  type RunFacts,
-  summaryOf,
-  withDatabase,
-} from './run-facts';
+import { createPredictor, factsOf, mayResume, plannedDwells, type RunFacts, summaryOf, withDatabase } from './run-facts';
 import type { Answer, RunChange, RunDriverParts } from './run-driver-parts';
 import { DATABASE_GRACE_MS, RunSaver } from './run-saver';
 import { ALIVE_MS, RunTimers } from './run-timers';
@@ -134,11 +124,6 @@ export class RunDriver {
     if (result === null) return { ok: false, why: 'This server no longer drives the run.' };
     if (refusal !== undefined) return { ok: false, why: String(refusal.data['why']) };
     return { ok: true, serverAtUtcMs: now.utcMs };
-  }
-
-  /** What is left if a held run is resumed now; null while it is not held. */
-  planFromHere(): ResumePlan | null {
-    return resumePlan(this.parts.start, this.snapshot, this.now().utcMs);
   }
 
   facts(): RunFacts {

@@ -129,7 +129,7 @@ export function withDatabase(facts: RunFacts, awaySinceUtcMs: number | null): Ru
   return { ...facts, reason: `${facts.reason} ${away}`.trim() };
 }
 
-export interface ResumePlan {
+interface ResumePlan {
   /** Dwells still to come, one that is begun anew included. */
   dwellsLeft: number;
   finishUtcMs: number;

@@ -232,7 +232,9 @@ export class LabServer {
     by: { who?: Role; tappedAt?: string } = {},
   ): request.Test {
     const { who = 'operator', ...rest } = by;
-    const body = what === 'resume' ? { tappedAt: this.nowIso(), reviewToken: this.resumeToken(runId, who), ...rest } : rest;
+    const reviewed = { userId: userIdOf(who), rigId: demoIds.rig, subject: resumeSubject(runId) };
+    const fresh = { tappedAt: this.nowIso(), reviewToken: this.services.reviews.issue(reviewed).token };
+    const body = what === 'resume' ? { ...fresh, ...rest } : rest;
     return this.as(who, 'POST', `/labs/${demoIds.lab}/runs/${runId}/${what}`).send(body);
   }
 
@@ -240,11 +242,6 @@ export class LabServer {
   startToken(protocolId: string): string {
     const subject = startSubject({ protocolId, revision: 1, massSetId: demoIds.massSet });
     return this.services.reviews.issue({ userId: userIdOf('operator'), rigId: demoIds.rig, subject }).token;
-  }
-
-  /** What the review of a resume gives; the tests of the review ask for it over HTTP. */
-  private resumeToken(runId: string, who: Role): string {
-    return this.services.reviews.issue({ userId: userIdOf(who), rigId: demoIds.rig, subject: resumeSubject(runId) }).token;
   }
 
   nowIso(): string {

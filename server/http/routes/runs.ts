@@ -3,6 +3,7 @@ import * as reviewContracts from '@/shared/contracts/reviews';
 import * as contracts from '@/shared/contracts/runs';
 import { stepsCsv } from '@/shared/archive/step-csv';
 import type { RunDriver } from '@/server/engine/run-driver';
+import { resumePlan } from '@/server/engine/run-facts';
 import type { Answer } from '@/server/engine/run-driver-parts';
 import type { Clock } from '@/server/interfaces/clock';
 import { findProtocol, findRevision } from '@/server/store/protocols';
@@ -144,9 +145,10 @@ const reviewRoutes = [
 
   mount(reviewContracts.reviewResume, async ({ params, me, membership, services }) => {
     const driver = await driverOf(services, membership.labId, params.runId);
-    const plan = driver.planFromHere();
-    if (plan === null) throw new ProblemError('not-possible-now', 'The run is not held, so there is nothing to resume.');
-    const rigId = services.activeRuns.find(membership.labId, params.runId)?.run.rigId ?? '';
+    const found = services.activeRuns.find(membership.labId, params.runId);
+    const plan = found === null ? null : resumePlan(found.run.start, driver.state(), services.clock.utcMs());
+    if (found === null || plan === null) throw new ProblemError('not-possible-now', 'The run is not held, so there is nothing to resume.');
+    const { rigId } = found.run;
     const { token, expiresUtcMs } = services.reviews.issue({ userId: me.userId, rigId, subject: resumeSubject(params.runId) });
     return { token, expiresAt: isoOf(expiresUtcMs), dwellsLeft: plan.dwellsLeft, finishAt: isoOf(plan.finishUtcMs) };
   }),

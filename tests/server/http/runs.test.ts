@@ -211,25 +211,6 @@ describe('a run', () => {
     expect((await stepsOf(runId)).at(-1)).toMatchObject({ kind: 'dwell', outcome: 'done' });
   });
 
-  test('that was disarmed cannot be resumed until somebody on site arms the rig again', async () => {
-    const runId = await lab.run(quickProtocol());
-    await lab.advance(3_600_000, () => lab.services.supervisor.driverOf(runId)?.facts().current?.kind === 'dwell');
-    await lab.intervene(runId, 'hold').expect(202);
-    await lab.until(runId, 'held');
-    await lab.as('operator', 'DELETE', `/labs/${demoIds.lab}/rigs/${demoIds.rig}/arm`).expect(204);
-    expect((await lab.intervene(runId, 'resume').expect(409)).body.code).toBe('not-armed');
-    await lab.arm();
-    const review = await lab.as('operator', 'POST', `${runs}/${runId}/resume-review`).expect(201);
-    // The first dwell of 30 s is begun anew, then a swing and the second one.
-    expect(review.body.dwellsLeft).toBe(2);
-    const leftS = (Date.parse(review.body.finishAt) - lab.clock.utcMs()) / 1000;
-    expect(leftS).toBeGreaterThan(60);
-    expect(leftS).toBeLessThan(120);
-    await lab.intervene(runId, 'resume').expect(202);
-    await lab.until(runId, 'finished');
-    expect(Math.abs(Date.parse((await lab.view(runId)).endedAt ?? '') - Date.parse(review.body.finishAt))).toBeLessThan(2_000);
-  });
-
   test('whose interlock opens is held, its arm is void', async () => {
     const runId = await lab.run(quickProtocol());
     await lab.advance(30_000);
