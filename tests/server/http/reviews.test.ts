@@ -28,9 +28,11 @@ describe('a start', () => {
     const another = lab.startToken(await lab.issue(quickProtocol({ name: 'Another' })));
     expect((await lab.askStart(protocolId, { reviewToken: another }).expect(409)).body.code).toBe('not-reviewed');
     const token = (await review()).body.token as string;
-    await lab.askStart(protocolId, { reviewToken: token }).expect(201);
+    const runId = (await lab.askStart(protocolId, { reviewToken: token }).expect(201)).body.id as string;
     expect((await lab.askStart(protocolId, { reviewToken: token }).expect(409)).body.code).toBe('not-reviewed');
     expect((await lab.askStart(protocolId, { reviewToken: undefined }).expect(400)).body.errors[0].path).toBe('reviewToken');
+    await lab.intervene(runId, 'stop').expect(202);
+    await lab.until(runId, 'stopped');
   });
 });
 
