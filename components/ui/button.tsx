@@ -66,7 +66,7 @@ export function Button({
       className={`flex-row items-center justify-center gap-2 rounded-action active:opacity-80 ${height} ${grounds[kind]} ${off ? 'opacity-50' : ''} ${className}`}
     >
       {busy ? (
-        <ActivityIndicator size="small" color={colors[words[kind].icon]} />
+        <ActivityIndicator size="small" color={colors[words[kind].icon]} aria-hidden />
       ) : icon === undefined ? null : (
         <Icon name={icon} size={size === 'action' ? 24 : 20} tone={words[kind].icon} />
       )}

@@ -38,7 +38,7 @@ export function Loading({ label = 'Loading' }: { label?: string }) {
   const { colors } = useTheme();
   return (
     <View role="status" aria-live="polite" className="flex-row items-center justify-center gap-3 py-10">
-      <ActivityIndicator color={colors.lamp} />
+      <ActivityIndicator color={colors.lamp} aria-hidden />
       <Body tone="dim">{label}</Body>
     </View>
   );

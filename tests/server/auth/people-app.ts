@@ -55,6 +55,7 @@ export async function peopleApp(connection: Connection, changes: Partial<ServerC
     newToken,
     sha256,
     database: connection,
+    databaseAwaySinceUtcMs: () => null,
     sessions,
     access: new AccessDirectory({ source: accessSource(connection.db, nowUtcMs), sessions, clock, sha256 }),
     idempotency: createIdempotency(connection.db, nowUtcMs),

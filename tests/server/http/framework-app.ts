@@ -55,6 +55,7 @@ export function appWith(routes: readonly MountedRoute[], config: Partial<ServerC
     log: pino({ level: 'info' }, { write: (line: string) => void logged.push(line) }),
     newId: () => 'a-request',
     sha256,
+    databaseAwaySinceUtcMs: () => null,
     idempotency: keys,
     access: {
       signedIn: async (token: string) => (token === member.token ? member : null),
