@@ -54,9 +54,10 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.taps('nest');
     await hand.at('step-4.1').waitFor();
     expect(await hand.reads('step-4')).toContain('Repeat');
+    const nested = await hand.readsOther('total-time', added);
     await hand.taps('duplicate');
     await hand.at('step-5').waitFor();
-    const doubled = await hand.readsOther('total-time', added);
+    const doubled = await hand.readsOther('total-time', nested);
     await hand.taps('delete');
     await hand.at('step-5').waitFor({ state: 'detached' });
     await hand.taps('undo');

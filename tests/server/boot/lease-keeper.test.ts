@@ -59,7 +59,8 @@ test('a rig whose driver is gone is taken over when its lease has run out, with 
   frozen.renew = async () => undefined;
   const frozenMs = clock.monotonicMs();
   await clock.advance(10_000, () => taken.length > 0);
-  expect((taken[0] ?? Infinity) - frozenMs).toBeLessThanOrEqual(leaseMs + 500);
+  // Taken over within 5 s: the lease, and the next look at it.
+  expect((taken[0] ?? Infinity) - frozenMs).toBeLessThanOrEqual(5_000);
   expect(await second.epochOf(rig)).toBe(epoch + 1);
   frozen.renew = renew;
   await clock.advance(2_000);
