@@ -25,7 +25,14 @@ const env = { ...process.env, EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres
 const jest = (more, report) =>
   pass(
     process.execPath,
-    [join(root, 'node_modules', 'jest', 'bin', 'jest.js'), '--testTimeout=30000', '--json', `--outputFile=${report}`, ...more],
+    [
+      join(root, 'node_modules', 'jest', 'bin', 'jest.js'),
+      '--testTimeout=30000',
+      '--forceExit',
+      '--json',
+      `--outputFile=${report}`,
+      ...more,
+    ],
     { cwd: root, env },
   );
 const [inBrowser, other] = [join(output, 'jest-browser.json'), join(output, 'jest.json')];
