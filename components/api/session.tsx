@@ -143,6 +143,8 @@ const rolesInWords: Record<Act, string> = {
   'run.resume': 'Only an operator, a keeper or an owner may resume a run.',
   'run.hold': 'Every member may hold a run.',
   'run.stop': 'Every member may stop a run.',
+  'alarm.acknowledge': 'Only an analyst, an operator, a keeper or an owner may acknowledge an alarm.',
+  'alarm.shelve': 'Only an operator, a keeper or an owner may shelve or reset an alarm.',
   'data.import': 'Only an analyst, an operator, a keeper or an owner may import data.',
   evaluate: 'Only an analyst, an operator, a keeper or an owner may evaluate a run.',
   read: 'Every member may read.',

@@ -14,6 +14,8 @@ const actWords: Record<Act, string> = {
   'run.resume': 'Resume a run',
   'run.hold': 'Hold a run',
   'run.stop': 'Stop a run',
+  'alarm.acknowledge': 'Acknowledge an alarm, and say that its answer is done',
+  'alarm.shelve': 'Shelve or reset an alarm',
   'data.import': 'Import data',
   evaluate: 'Evaluate a run',
   read: 'Read everything',

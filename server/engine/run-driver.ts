@@ -46,7 +46,7 @@ export class RunDriver {
   private readonly unsubscribe: () => void;
   private dwellsPlanned: number | null = null;
 
-  constructor(private readonly parts: RunDriverParts) {
+  constructor(readonly parts: RunDriverParts) {
     const { start, stored, clock, link, store } = parts;
     this.runId = start.runId;
     this.snapshot = stored?.snapshot == null ? beginRun(start, clock.utcMs()) : snapshotIn(stored);

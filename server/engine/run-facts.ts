@@ -13,6 +13,8 @@ export interface RunFacts {
   state: RunState;
   /** Why it is held, stopped or failed, and what would help; empty while all is well. */
   reason: string;
+  /** Of the reason; empty while there is none. */
+  reasonCode: string;
   startedAtUtcMs: number | null;
   endedAtUtcMs: number | null;
   predictedEndUtcMs: number | null;
@@ -98,6 +100,7 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, pre
     runId: start.runId,
     state: runStateOf(snapshot),
     reason: context.reason?.text ?? '',
+    reasonCode: context.reason?.code ?? '',
     startedAtUtcMs: context.startedAtUtcMs,
     endedAtUtcMs: context.endedAtUtcMs,
     predictedEndUtcMs,

@@ -86,6 +86,7 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
     runId: run.id,
     state: run.state,
     reason: run.failure ?? services.supervisor.quarantinedOf(run.rigId)?.why ?? '',
+    reasonCode: '',
     startedAtUtcMs: run.startedAt,
     endedAtUtcMs: run.endedAt,
     predictedEndUtcMs: run.predictedEndAt,

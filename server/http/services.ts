@@ -8,6 +8,9 @@ import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { IdempotencyPort } from '../interfaces/idempotency';
 import type { LockKeeper } from '../interfaces/lock-keeper';
 import type { MailPort } from '../interfaces/mail';
+import type { OutgoingPort } from '../interfaces/outgoing';
+import type { PushPort } from '../interfaces/push';
+import type { TellParts } from '../notify/tell';
 import type { RigStations } from '../interfaces/rig-stations';
 import type { SampleStore } from '../interfaces/sample-store';
 import type { ServerConfig } from '../interfaces/server-config';
@@ -35,6 +38,10 @@ export interface Services {
   access: AccessDirectory;
   idempotency: IdempotencyPort;
   mail: MailPort;
+  push: PushPort;
+  outgoing: OutgoingPort;
+  /** How people are told, by every means. */
+  tell: TellParts;
   samples: SampleStore;
   stations: RigStations;
   arms: ArmKeeper;

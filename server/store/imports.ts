@@ -113,10 +113,18 @@ export class UnsuitableChannelError extends Error {
  */
 export function storeImport(
   connection: Connection,
-  work: { labId: string; importId: string; channel: WantedChannel; storedAt: number; mapping: z.infer<typeof importMappingSchema> },
+  work: {
+    labId: string;
+    importId: string;
+    channel: WantedChannel;
+    storedAt: number;
+    mapping: z.infer<typeof importMappingSchema>;
+    /** What has to be written in the same transaction when all is stored. */
+    also?: (handle: Handle, stored: number) => Promise<void>;
+  },
   fill: (take: (batch: SampleBatch) => Promise<void>) => Promise<void>,
 ): Promise<{ channel: ChannelRecord; stored: number; known: number }> {
-  const { labId, importId, channel: wanted, ...change } = work;
+  const { labId, importId, channel: wanted, also, ...change } = work;
   return connection.bulk(async (client, handle) => {
     // Two who commit the same import: the second waits here and then finds it stored.
     await handle
@@ -135,6 +143,7 @@ export function storeImport(
       sum.known += known;
     });
     await changeImport(handle, { labId, importId }, { ...change, state: 'stored', channelId: channel.id });
+    await also?.(handle, sum.stored);
     return sum;
   });
 }

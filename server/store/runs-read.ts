@@ -21,6 +21,7 @@ const summaryColumns = {
   protocolRevision: runs.protocolRevision,
   massSetLabel: runs.massSetLabel,
   operator: runs.operator,
+  startedById: runs.startedById,
   lastSeq: runs.lastSeq,
   state: runs.state,
   outcome: runs.outcome,

@@ -1,3 +1,5 @@
+import * as alarms from './alarms';
+import * as calls from './calls';
 import * as data from './data';
 import * as doors from './doors';
 import * as evaluations from './evaluations';
@@ -11,6 +13,7 @@ import * as runs from './runs';
 import * as schedules from './schedules';
 import * as service from './service';
 import * as standing from './standing';
+import * as work from './work';
 
 const isRoute = (value: unknown): value is RouteContract =>
   typeof value === 'object' && value !== null && 'method' in value && 'path' in value && 'access' in value;
@@ -29,4 +32,7 @@ export const routes: readonly RouteContract[] = [
   doors,
   data,
   evaluations,
+  work,
+  alarms,
+  calls,
 ].flatMap((module) => Object.values(module).filter(isRoute));

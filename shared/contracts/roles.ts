@@ -20,6 +20,8 @@ export const acts = {
   'run.resume': upTo('operator'),
   'run.hold': all,
   'run.stop': all,
+  'alarm.acknowledge': upTo('analyst'),
+  'alarm.shelve': upTo('operator'),
   'data.import': upTo('analyst'),
   evaluate: upTo('analyst'),
   read: all,

@@ -42,6 +42,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
   webDir: null,
   smtpUrl: null,
   mailFrom: 'Evenfall <evenfall@quillfen.example>',
+  privateHosts: [],
   logLevel: 'silent',
   limits: {
     requestsPerMinute: 1_000_000,

@@ -1,5 +1,7 @@
 import type { MountedRoute } from '../route-context';
+import { alarmRoutes } from './alarms';
 import { armingRoutes } from './arming';
+import { callRoutes } from './calls';
 import { dataRoutes } from './data';
 import { doorRoutes } from './doors';
 import { evaluationRoutes } from './evaluations';
@@ -11,6 +13,7 @@ import { rigRoutes } from './rigs';
 import { runRoutes } from './runs';
 import { scheduleRoutes } from './schedules';
 import { serviceRoutes } from './service';
+import { workRoutes } from './work';
 
 /** Every route of the API with the function that answers it. */
 export const allRoutes: readonly MountedRoute[] = [
@@ -26,4 +29,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...doorRoutes,
   ...dataRoutes,
   ...evaluationRoutes,
+  ...workRoutes,
+  ...alarmRoutes,
+  ...callRoutes,
 ];
