@@ -6,6 +6,7 @@ import { PlanView } from '@/components/charts/plan-view';
 import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, Section, useWide } from '@/components/ui';
 import type { RigView } from '@/shared/contracts/rigs';
 import { ArmPanel } from './arm-panel';
+import { DevicesPanel } from './devices-panel';
 import { linkState } from './link-words';
 import { LinkPanel } from './link-panel';
 import { LiveFacts } from './live-facts';
@@ -62,6 +63,7 @@ export function RigScreen() {
       <ArmPanel rig={rig} />
       <LockPanel rig={rig} />
       <LinkPanel rig={rig} />
+      <DevicesPanel rig={rig} />
     </Screen>
   );
 }

@@ -6,4 +6,3 @@ export * from './runs';
 export * from './data';
 export * from './work';
 export * from './schedules';
-export * from './alarms';

@@ -40,7 +40,6 @@ export async function queueDemoRehearsal({ db }: Connection, nowUtcMs: number): 
       start,
       protocolId: demoIds.shortProtocol,
       massSetId: null,
-      startedById: null,
       state: 'rehearsing',
       nowUtcMs: nowUtcMs - agoMs,
       predictedEndUtcMs: null,

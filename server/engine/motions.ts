@@ -4,7 +4,9 @@ import { swingMove } from '@/shared/protocol/durations';
 import type { Instant } from '../interfaces/clock';
 import type { Draft } from './draft';
 import { forgetPosition, noteHomed } from './position';
-import { endStanding, openSwing, sendMove, standingEndUtcMs, toleranceDeg, writeMark } from './steps';
+import { cursorMoment } from './dwells';
+import { toleranceDeg } from './rows';
+import { endStanding, openSwing, sendMove, standingEndUtcMs, writeMark } from './steps';
 import { LATE_MS, MOTION_GRACE_MS } from './timing';
 
 /** How a motion is followed: begun, refused, ended, finished. */
@@ -21,7 +23,8 @@ export function takeAhead(draft: Draft): void {
   context.step = null;
   context.ahead = null;
   for (;;) {
-    const { item, cursor } = advanceCursor(draft.start, context.cursor, context.moment);
+    const { item, cursor } = advanceCursor(draft.start, context.cursor, cursorMoment(draft));
+    context.dwellJustNotGood = false;
     if (item === null) return;
     context.cursor = cursor;
     if (item.step.kind === 'swing') {

@@ -1,6 +1,5 @@
-import * as alarms from './alarms';
-import * as calls from './calls';
 import * as data from './data';
+import * as devices from './devices';
 import * as doors from './doors';
 import * as evaluations from './evaluations';
 import * as link from './link';
@@ -13,7 +12,6 @@ import * as runs from './runs';
 import * as schedules from './schedules';
 import * as service from './service';
 import * as standing from './standing';
-import * as work from './work';
 
 const isRoute = (value: unknown): value is RouteContract =>
   typeof value === 'object' && value !== null && 'method' in value && 'path' in value && 'access' in value;
@@ -31,8 +29,6 @@ export const routes: readonly RouteContract[] = [
   schedules,
   doors,
   data,
+  devices,
   evaluations,
-  work,
-  alarms,
-  calls,
 ].flatMap((module) => Object.values(module).filter(isRoute));

@@ -1,8 +1,7 @@
 import type { MountedRoute } from '../route-context';
-import { alarmRoutes } from './alarms';
 import { armingRoutes } from './arming';
-import { callRoutes } from './calls';
 import { dataRoutes } from './data';
+import { deviceRoutes } from './devices';
 import { doorRoutes } from './doors';
 import { evaluationRoutes } from './evaluations';
 import { lineRoutes } from './line';
@@ -13,7 +12,6 @@ import { rigRoutes } from './rigs';
 import { runRoutes } from './runs';
 import { scheduleRoutes } from './schedules';
 import { serviceRoutes } from './service';
-import { workRoutes } from './work';
 
 /** Every route of the API with the function that answers it. */
 export const allRoutes: readonly MountedRoute[] = [
@@ -28,8 +26,6 @@ export const allRoutes: readonly MountedRoute[] = [
   ...scheduleRoutes,
   ...doorRoutes,
   ...dataRoutes,
+  ...deviceRoutes,
   ...evaluationRoutes,
-  ...workRoutes,
-  ...alarmRoutes,
-  ...callRoutes,
 ];
