@@ -1,6 +1,7 @@
 import { Screen, Section } from '@/components/ui';
 import { Account } from './account';
 import { Appearance } from './appearance';
+import { GivenUpJobs } from './given-up-jobs';
 import { LabSettings } from './lab-settings';
 import { Members } from './members';
 import { RoleMatrix } from './role-matrix';
@@ -23,6 +24,7 @@ export function LabScreen() {
       <Appearance />
       <LabSettings />
       <Members />
+      <GivenUpJobs />
     </Screen>
   );
 }

@@ -6,7 +6,6 @@ import { PlanView } from '@/components/charts/plan-view';
 import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, Section, useWide } from '@/components/ui';
 import type { RigView } from '@/shared/contracts/rigs';
 import { ArmPanel } from './arm-panel';
-import { DevicesPanel } from './devices-panel';
 import { linkState } from './link-words';
 import { LinkPanel } from './link-panel';
 import { LiveFacts } from './live-facts';
@@ -63,7 +62,6 @@ export function RigScreen() {
       <ArmPanel rig={rig} />
       <LockPanel rig={rig} />
       <LinkPanel rig={rig} />
-      <DevicesPanel rig={rig} />
     </Screen>
   );
 }

@@ -1,6 +1,6 @@
 import { useReducer, useRef } from 'react';
 import { ApiProblem, call, deviceNowMs, newIdempotencyKey, serverNowIso, serverNowMs } from '@/components/api';
-import { holdAfterDwell, holdRun, confirmPrompt, resumeRun, stopRun } from '@/shared/contracts/runs';
+import { holdAfterDwell, holdRun, resumeRun, stopRun } from '@/shared/contracts/runs';
 import { interventionReducer, type LocalIntervention, type SafeAct } from './intervention';
 import { sendUntilAnswered, type Attempt, type Sending } from './send-until-answered';
 
@@ -85,22 +85,17 @@ const resumeExpiresMs = 5000;
  * Resumes once. It is never sent again by itself and never waits for a connection.
  * @throws ApiProblem when refused; ApiUnreachable or an abort when there was no answer in 5 s.
  */
-export const resumeOnce = ({ labId, runId }: RunAddress, reviewToken: string): Promise<{ serverAt: string }> =>
-  once(async (signal) => {
-    const body = { tappedAt: serverNowIso(), reviewToken };
-    return (await call(resumeRun, { params: { labId, runId }, body, signal })).data;
-  });
-
-/** Confirms a prompt, by the same rules as `resumeOnce`. */
-export const confirmPromptOnce = ({ labId, runId }: RunAddress): Promise<{ serverAt: string }> =>
-  once(async (signal) => (await call(confirmPrompt, { params: { labId, runId }, body: { tappedAt: serverNowIso() }, signal })).data);
-
-async function once<T>(send: (signal: AbortSignal) => Promise<T>): Promise<T> {
+export async function resumeOnce({ labId, runId }: RunAddress, reviewToken: string): Promise<{ serverAt: string }> {
   const abort = new AbortController();
   const startedMs = deviceNowMs();
   const timer = setTimeout(() => abort.abort(), resumeExpiresMs);
   try {
-    return await send(abort.signal);
+    const { data } = await call(resumeRun, {
+      params: { labId, runId },
+      body: { tappedAt: serverNowIso(), reviewToken },
+      signal: abort.signal,
+    });
+    return data;
   } catch (error) {
     if (deviceNowMs() - startedMs >= resumeExpiresMs) throw new ResumeExpired();
     throw error;
@@ -113,7 +108,7 @@ async function once<T>(send: (signal: AbortSignal) => Promise<T>): Promise<T> {
 export class ResumeExpired extends Error {
   constructor() {
     super(
-      'There was no answer in 5 s, so what you asked for has expired and was not sent again. Look at the state above before you try once more.',
+      'There was no answer in 5 s, so this resume has expired and was not sent again. Look at the state above before you try once more.',
     );
     this.name = 'ResumeExpired';
   }

@@ -6,3 +6,4 @@ export * from './runs';
 export * from './data';
 export * from './work';
 export * from './schedules';
+export * from './alarms';

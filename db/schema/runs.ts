@@ -15,6 +15,7 @@ import {
 import type { RunStart, StepOutcome, StepRow, StepRowKind } from '../../shared/archive/run-records';
 import type { RunState } from '../../shared/contracts/runs';
 import { instant, key } from './columns';
+import { users } from './people';
 import { protocols } from './protocols';
 import { massSets, rigRevisions } from './rigs';
 
@@ -35,6 +36,8 @@ export const runs = pgTable(
     protocolRevision: integer('protocol_revision').notNull(),
     massSetLabel: text('mass_set_label').notNull(),
     operator: text('operator').notNull(),
+    /** Account of the operator; null for runs of before this column. */
+    startedById: key('started_by_id').references(() => users.id),
     /** Everything that was decided before the first motion, protocol and rig included. */
     start: json('start').$type<RunStart>().notNull(),
     /** The engine's own state; null until its first commit. */

@@ -115,7 +115,15 @@ async function prepare(database: BenchDatabase): Promise<void> {
     ...{ protocolName: 'Bench', protocolRevision: 1, timeZone: 'Europe/Zurich', operator: 'bench', notes: '' },
     protocol: { formatVersion: 1 as const, name: 'Bench', steps: [{ kind: 'home' as const }] },
   };
-  const row = { start, protocolId: null, massSetId: null, state: 'starting' as const, nowUtcMs: startUtcMs, predictedEndUtcMs: null };
+  const row = {
+    start,
+    protocolId: null,
+    massSetId: null,
+    startedById: null,
+    state: 'starting' as const,
+    nowUtcMs: startUtcMs,
+    predictedEndUtcMs: null,
+  };
   if (!(await insertRun(database.connection.db, row))) throw new Error('the run of the benchmark was refused');
 }
 

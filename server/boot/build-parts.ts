@@ -3,6 +3,8 @@ import type { Clock } from '../interfaces/clock';
 import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { RunJournals } from '../interfaces/run-journal';
 import type { MailPort } from '../interfaces/mail';
+import type { OutgoingPort } from '../interfaces/outgoing';
+import type { PushPort } from '../interfaces/push';
 import type { StationRig } from '../interfaces/rig-stations';
 import type { ServerConfig } from '../interfaces/server-config';
 import type { SimulatedController } from '../links/simulated-controller';
@@ -19,6 +21,8 @@ export interface BuildParts {
 
 export interface BuildOverrides {
   mail?: MailPort;
+  push?: PushPort;
+  outgoing?: OutgoingPort;
   log?: Logger;
   /** Heavy work without worker threads. */
   tasks?: HeavyTasks;

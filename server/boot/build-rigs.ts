@@ -3,13 +3,14 @@ import { hostname } from 'node:os';
 import { join } from 'node:path';
 import type { Logger } from 'pino';
 import type { Arming } from '../engine/arming';
+import type { RunStart } from '@/shared/archive/run-records';
 import { endOfArm, knownAfter } from '../engine/end-of-arm';
 import { GuidedMoves } from '../engine/guided-moves';
-import { RigSupervisor } from '../engine/rig-supervisor';
+import type { NoticeTopic } from '../engine/run-context';
+import { RigSupervisor, type SupervisorParts } from '../engine/rig-supervisor';
 import { DATABASE_GRACE_MS } from '../engine/run-saver';
 import { sha256Hex } from '../evaluation/sha256';
 import type { RigStation } from '../interfaces/rig-stations';
-import type { SampleReader } from '../interfaces/sample-reader';
 import type { SampleStore } from '../interfaces/sample-store';
 import type { LinkEvent } from '../interfaces/turntable-link';
 import { createRunStore } from '../store/run-store';
@@ -30,12 +31,15 @@ export interface RigSideWiring {
   log: Logger;
   background: Background;
   samples: SampleStore;
-  samplesOf(rigId: string): SampleReader;
   onLine(rigId: string): void;
   /** A rig that another process drove is this one's now. */
   onTaken(rig: RigKey): void;
   /** The database does not answer since then; null: it does again. */
   onDatabase(sinceUtcMs: number | null): void;
+  /** What a run has to say to whoever started it. */
+  onNotice(start: RunStart, notice: { topic: NoticeTopic; text: string }): void;
+  /** What a line told, and whether the rig was armed just before. */
+  onLinkEvent(station: RigStation, event: LinkEvent, wasArmed: boolean): void;
 }
 
 export interface RigSide {
@@ -50,16 +54,14 @@ export interface RigSide {
 }
 
 /** All that has to do with the rigs: who may move them, their lines, and the engine that drives runs. */
-export function buildRigSide(
-  parts: BuildParts,
-  { log, background, samples, samplesOf, onLine, onTaken, onDatabase }: RigSideWiring,
-): RigSide {
+export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide {
+  const { log, background, samples, onLine, onTaken, onDatabase } = wiring;
   const { engineDatabase: database = parts.database, clock, overrides = {} } = parts;
   const { arms, arming, locks } = buildStanding(parts, {
     ...{ log, background, onLine },
     stationOf: (rigId) => stations.get(rigId),
     supervisor: () => supervisor,
-    guided: (): GuidedMoves => guided,
+    guided: () => guided,
   });
   const leases = new LeaseKeeper({
     database,
@@ -92,15 +94,18 @@ export function buildRigSide(
     whyDisarmed: (rigId) => arms.endedOf(rigId)?.why ?? '',
     lockedBy: (rigId) => locks.lockedBy(rigId),
     guidedBy: (rigId) => guided.takenBy(rigId),
-    samplesOf,
-    perform: (effect, start) => {
-      if (effect.kind === 'void-arm') arms.end({ labId: start.labId, rigId: start.rigId }, effect.reason, engineItself);
-      else log.info({ runId: start.runId, topic: effect.topic }, effect.text);
-    },
+    perform: performing(arms, wiring),
   });
 
-  const guided = buildGuided({ clock, linkOf, arms, locks, onLine, supervisor });
-  const heed = heedLinks({ arms, arming, guided, log });
+  const guided: GuidedMoves = new GuidedMoves({
+    ...{ clock, linkOf },
+    armOf: (rigId) => arms.armOf(rigId),
+    takenBy: (rigId) => supervisor.takenBy(rigId),
+    lockedBy: (rigId) => locks.lockedBy(rigId),
+    endArm: (rig, why, by) => arms.end(rig, why, by),
+    onChange: onLine,
+  });
+  const heed = heedLinks({ arms, arming, guided }, wiring);
 
   /** Two drivers on one rig would be worse than none. */
   function letGo({ rigId }: RigKey): void {
@@ -112,35 +117,26 @@ export function buildRigSide(
   return { arms, arming, locks, leases, stations, supervisor, guided, apparatus };
 }
 
-function buildGuided(parts: {
-  clock: BuildParts['clock'];
-  linkOf: (rigId: string) => RigStation['link'] | null;
-  arms: RigSide['arms'];
-  locks: RigSide['locks'];
-  onLine: (rigId: string) => void;
-  supervisor: RigSupervisor;
-}): GuidedMoves {
-  const { clock, linkOf, arms, locks, onLine, supervisor } = parts;
-  return new GuidedMoves({
-    ...{ clock, linkOf },
-    armOf: (rigId) => arms.armOf(rigId),
-    takenBy: (rigId) => supervisor.takenBy(rigId),
-    lockedBy: (rigId) => locks.lockedBy(rigId),
-    endArm: (rig, why, by) => arms.end(rig, why, by),
-    onChange: onLine,
-  });
-}
-
 /** What each line tells: whatever lets people or surprises into the room, or loses the position, ends the arm, run or no run. */
-function heedLinks({ arms, arming, guided, log }: Pick<RigSide, 'arms' | 'arming' | 'guided'> & { log: Logger }) {
+function heedLinks({ arms, arming, guided }: Pick<RigSide, 'arms' | 'arming' | 'guided'>, { log, onLinkEvent }: RigSideWiring) {
   const known = new Map<string, boolean>();
   return (station: RigStation, event: LinkEvent): void => {
     const wasKnown = known.get(station.rigId) ?? false;
+    const wasArmed = arms.armOf(station.rigId) !== null;
     const why = endOfArm(event, { wasKnown, armedBootId: arms.armOf(station.rigId)?.bootId ?? null });
     known.set(station.rigId, knownAfter(event, wasKnown));
     if (why !== null) arms.end(station, why, engineItself);
     if (event.kind === 'clock-stepped') log.warn({ rigId: station.rigId, clock: event.clock, byMs: event.byMs }, 'a clock stepped');
     arming.heard(station.rigId, event);
     guided.heard(station.rigId, event);
+    onLinkEvent(station, event, wasArmed);
   };
 }
+
+/** What the runs ask for beside their commands to the controller. */
+const performing =
+  (arms: MemoryArmKeeper, { onNotice }: RigSideWiring): SupervisorParts['perform'] =>
+  (effect, start) => {
+    if (effect.kind === 'void-arm') arms.end({ labId: start.labId, rigId: start.rigId }, effect.reason, engineItself);
+    else onNotice(start, effect);
+  };

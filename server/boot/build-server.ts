@@ -5,10 +5,12 @@ import { createApp } from '../http/create-app';
 import { allRoutes } from '../http/routes';
 import type { Services } from '../http/services';
 import { heedSchedules } from '../http/work/scheduled-starts';
+import { sendSigns } from '../http/work/signs-of-life';
 import type { Cancel } from '../interfaces/clock';
 import { startTicks } from '../scheduler/ticks';
 import { keepHouse } from '../store/housekeeping';
 import { allRigs } from '../store/rigs';
+import { anchorAudit } from './audit-anchor';
 import type { BuildParts } from './build-parts';
 import { buildServices, type Inside } from './build-services';
 
@@ -59,17 +61,21 @@ class Life {
   async start(): Promise<void> {
     const { services, inside } = this;
     const { db } = services.database;
+    const { stateDir } = services.config;
     await keepHouse(db, services.clock.utcMs());
     await inside.takeRigs(await allRigs(db));
     inside.leases.renewRegularly();
     inside.tellTakenUp();
     this.refreshRegularly();
     inside.crew.start();
+    inside.watch.start();
     if (this.parts.overrides?.ticks ?? services.config.mode !== 'test')
       this.ticks = startTicks(
         [
           { name: 'heed schedules', cron: '* * * * *', work: () => heedSchedules(services) },
+          { name: 'signs of life', cron: '* * * * *', work: () => sendSigns(services) },
           { name: 'keep house', cron: '7 * * * *', work: () => keepHouse(db, services.clock.utcMs()) },
+          { name: 'anchor the audit', cron: '11 4 * * *', work: () => anchorAudit(db, { stateDir, nowUtcMs: services.clock.utcMs() }) },
         ],
         services.log,
       );
@@ -79,6 +85,7 @@ class Life {
     const { services, inside } = this;
     this.stopped = true;
     this.cancelRefresh();
+    inside.watch.stop();
     services.live.close();
     services.lines.close();
     services.guided.closeAll();

@@ -10,14 +10,18 @@ import { liveSourceOf, mayStillRead } from '../http/live/live-source';
 import { lineOf } from '../http/line-view';
 import { Reviews } from '../http/reviews';
 import type { Services } from '../http/services';
+import { AlarmWatch } from '../http/work/alarm-watch';
 import { workEvaluation } from '../http/work/evaluation-job';
 import { rehearsalJobKind, workRehearsal } from '../http/work/rehearsal-job';
-import { AppendRates } from '../ingest/append-rate';
-import { RecentSamples } from '../ingest/recent-samples';
+import { tellStarter } from '../http/work/tell-starter';
 import type { MailPort } from '../interfaces/mail';
 import type { StationRig } from '../interfaces/rig-stations';
 import type { ServerConfig } from '../interfaces/server-config';
+import { alarmJobs } from '../notify/alarm-jobs';
 import { mailJobs } from '../notify/mail-jobs';
+import { createOutgoing } from '../notify/outgoing';
+import { runNoticeJobs } from '../notify/run-notices';
+import { createWebPush } from '../notify/web-push';
 import { evaluationJobKind } from '../store/evaluations';
 import { createIdempotency } from '../store/idempotency';
 import { createJobQueue } from '../store/jobs';
@@ -26,6 +30,7 @@ import { createSampleStore } from '../store/sample-store';
 import { Background } from './background';
 import type { BuildParts } from './build-parts';
 import { buildRigSide, type RigSide } from './build-rigs';
+import { freeDisk } from './free-disk';
 import { JobCrew } from './job-crew';
 import { RigTaking } from './take-rigs';
 import { createWorkerTasks } from './worker-tasks';
@@ -34,6 +39,7 @@ import { createWorkerTasks } from './worker-tasks';
 export interface Inside extends Omit<RigSide, 'supervisor' | 'guided'> {
   crew: JobCrew;
   background: Background;
+  watch: AlarmWatch;
   /** Drives these rigs, as far as nobody else does. */
   takeRigs(rigs: readonly StationRig[]): Promise<void>;
   /** Unfinished runs are driven from now on. */
@@ -53,28 +59,27 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   let awaySinceUtcMs: number | null = null;
   const nowUtcMs = () => clock.utcMs();
   const samples = createSampleStore(database);
-  const recent = new RecentSamples();
   const sessions = createSessions({ db: database.db, clock, newToken, sha256: sha256Hex });
   const { arms, arming, locks, leases, stations, supervisor, guided, apparatus } = buildRigSide(parts, {
     ...{ log, background, samples },
-    samplesOf: (rigId) => recent.readerOf(rigId),
     onLine: (rigId) => lines.changed(rigId),
     onTaken: (rig) => background.add(taking.takenOver(rig), 'taking a rig over'),
-    onDatabase: (sinceUtcMs) => (awaySinceUtcMs = sinceUtcMs),
+    onDatabase: (sinceUtcMs) => watch.noteDatabase((awaySinceUtcMs = sinceUtcMs)),
+    onNotice: (start, notice) => tellStarter(services, start, notice),
+    onLinkEvent: (station, event, wasArmed) => watch.heard(station, event, wasArmed),
   });
-  const { live, lines } = buildHubs(parts, () => services);
+  const live = new LiveHub({ source: liveSourceOf(() => services), clock, streamsPerUser: config.limits.streamsPerUser });
+  const lines = buildLines(parts, () => services);
   const access = new AccessDirectory({ source: accessSource(database.db, nowUtcMs), sessions, clock, sha256: sha256Hex });
   const workers = overrides.tasks === undefined ? createWorkerTasks() : null;
   const takenUp = openPromise();
   const services: Services = {
     ...{ clock, log, database, sessions, access, samples, stations, arms, arming, locks, supervisor, guided, live, lines, newToken },
-    config: { ...config, limits: { ...config.limits }, devices: { ...config.devices } },
+    config: { ...config, limits: { ...config.limits } },
     ...{ newId: randomUUID, sha256: sha256Hex },
-    appendRates: new AppendRates(clock, () => services.config.devices),
-    arrived: arrival(recent, live),
     reviews: new Reviews({ clock, newToken }),
     idempotency: createIdempotency(database.db, nowUtcMs),
-    mail: overrides.mail ?? noMail,
+    ...buildTelling(parts, () => services.config.port),
     activeRuns: new ActiveRuns({ supervisor, live }),
     watchedLabs: () => [...new Set([...services.activeRuns.labIds(), ...guided.labIds()])],
     tasks: overrides.tasks ?? (workers as NonNullable<typeof workers>),
@@ -84,19 +89,20 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     breathe: () => new Promise((resolve) => setImmediate(resolve)),
     pokeJobs: () => crew.poke(),
   };
+  const watch = new AlarmWatch({ services, paceMs: overrides.paceMs, freeDisk: () => freeDisk(config.stateDir) });
   const crew = buildCrew(parts, services);
   const taking = new RigTaking(services, { leases, arms, locks, stations });
   access.onEnded((ended) => {
     live.endAccess(ended);
     lines.endAccess(ended);
   });
-  stations.onSamples(({ rigId, channelId, channel, unit, rateHz, utcMs, value }) =>
-    services.arrived(rigId, { name: channel, channelId, unit, rateHz, role: 'deflection' }, { utcMs, value }),
+  stations.onSamples(({ rigId, channelId, channel, unit, utcMs, value }) =>
+    live.sampled(rigId, { channelId, channel, unit, utcMs: [...utcMs], value: [...value] }),
   );
   return {
     services,
     inside: {
-      ...{ leases, arms, arming, locks, stations, apparatus, crew, background },
+      ...{ leases, arms, arming, locks, stations, apparatus, crew, background, watch },
       takeRigs: (rigs) => taking.takeAll(rigs),
       tellTakenUp: takenUp.resolve,
       closeTasks: async () => workers?.close(),
@@ -104,24 +110,26 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   };
 }
 
-/** What follows runs and lines live. */
-function buildHubs({ clock, config }: BuildParts, services: () => Services): Pick<Services, 'live' | 'lines'> {
-  const { streamsPerUser } = config.limits;
-  const live = new LiveHub({ source: liveSourceOf(services), clock, streamsPerUser });
-  const lines = new LineHub({
-    ...{ clock, streamsPerUser },
+/** The lines of the rigs as pages follow them. */
+function buildLines({ clock, config }: BuildParts, services: () => Services): LineHub {
+  return new LineHub({
+    clock,
     lineOf: (rig) => lineOf(services(), rig),
     mayStillRead: (reader, labId) => mayStillRead(services(), reader, labId),
+    streamsPerUser: config.limits.streamsPerUser,
   });
-  return { live, lines };
 }
 
-/** Where samples go that have just come, besides the database. */
-function arrival(recent: RecentSamples, live: LiveHub): Services['arrived'] {
-  return (rigId, { channelId, name, unit, role, rateHz }, { utcMs, value }) => {
-    recent.add(rigId, { name, unit, role, rateHz }, { utcMs, value });
-    live.sampled(rigId, { channelId, channel: name, unit, utcMs: [...utcMs], value: [...value] });
-  };
+/** How people and watchers are reached. */
+function buildTelling({ database: { db }, clock, config, overrides = {} }: BuildParts, port: () => number) {
+  const nowUtcMs = () => clock.utcMs();
+  const origin = () => config.publicUrl ?? `http://${config.host}:${String(port())}`;
+  const mail = overrides.mail ?? noMail;
+  const outgoing = overrides.outgoing ?? createOutgoing(config.privateHosts);
+  const address = /<([^>]+)>/.exec(config.mailFrom)?.[1] ?? config.mailFrom;
+  const subject = config.publicUrl?.startsWith('https:') === true ? config.publicUrl : `mailto:${address}`;
+  const push = overrides.push ?? createWebPush({ db, outgoing, subject, nowUtcMs });
+  return { mail, push, outgoing, tell: { db, clock, mail, push, origin } };
 }
 
 /** Workers of this process: mails do not wait behind a rehearsal. */
@@ -135,6 +143,7 @@ function buildCrew({ overrides = {} }: BuildParts, services: Services): JobCrew 
     crews: {
       work: { [evaluationJobKind]: (job) => workEvaluation(services, job), [rehearsalJobKind]: (job) => workRehearsal(services, job) },
       mail: mailJobs({ db: database.db, clock, mail, newToken, sha256: sha256Hex }),
+      calls: { ...alarmJobs(services.tell), ...runNoticeJobs(services.tell) },
     },
   });
 }

@@ -31,6 +31,15 @@ const environmentSchema = z.object({
     .regex(/^smtps?:\/\//, 'must begin with smtp:// or smtps://')
     .optional(),
   EVENFALL_MAIL_FROM: z.string().min(3).default('Evenfall <evenfall@localhost>'),
+  EVENFALL_PRIVATE_HOSTS: z
+    .string()
+    .default('')
+    .transform((text) =>
+      text
+        .split(',')
+        .map((host) => host.trim().toLowerCase())
+        .filter((host) => host !== ''),
+    ),
   EVENFALL_LOG_LEVEL: z.enum(['silent', 'fatal', 'error', 'warn', 'info', 'debug']).default('info'),
   EVENFALL_REQUESTS_PER_MINUTE: count(10, 1_000_000, 1200),
   EVENFALL_INTERVENTIONS_PER_MINUTE: count(10, 1_000_000, 600),
@@ -66,6 +75,7 @@ export function readConfig(environment: Record<string, string | undefined>): Ser
     webDir: env.EVENFALL_WEB_DIR === 'none' ? null : resolve(env.EVENFALL_WEB_DIR),
     smtpUrl: env.EVENFALL_SMTP_URL ?? null,
     mailFrom: env.EVENFALL_MAIL_FROM,
+    privateHosts: env.EVENFALL_PRIVATE_HOSTS,
     logLevel: env.EVENFALL_LOG_LEVEL,
     limits: {
       requestsPerMinute: env.EVENFALL_REQUESTS_PER_MINUTE,
@@ -74,6 +84,5 @@ export function readConfig(environment: Record<string, string | undefined>): Ser
       importBytes: env.EVENFALL_IMPORT_MIB * 1_048_576,
       streamsPerUser: 6,
     },
-    devices: { batchBytes: 1_048_576, batchesPerMinute: 120, samplesPerMinute: 120_000 },
   };
 }

@@ -40,6 +40,7 @@ export async function queueDemoRehearsal({ db }: Connection, nowUtcMs: number): 
       start,
       protocolId: demoIds.shortProtocol,
       massSetId: null,
+      startedById: null,
       state: 'rehearsing',
       nowUtcMs: nowUtcMs - agoMs,
       predictedEndUtcMs: null,

@@ -1,8 +1,6 @@
 import type { RunStart, StepOutcome, StepRow } from '@/shared/archive/run-records';
 import type { Instant } from '../interfaces/clock';
 import type { LinkCommand } from '../interfaces/turntable-link';
-import { noteVerdict } from './verdict';
-import type { Look } from './look';
 import { noteRowClosed } from './position';
 import type {
   ActiveStep,
@@ -100,10 +98,6 @@ export class Draft {
     this.out.effects.push({ kind: 'notify', id: this.nextId(), topic, text });
   }
 
-  look(look: Look): void {
-    this.out.effects.push({ kind: 'look', id: this.nextId(), look });
-  }
-
   voidArm(reason: string): void {
     this.context.armVoid = reason;
     this.out.effects.push({ kind: 'void-arm', id: this.nextId(), reason });
@@ -136,7 +130,8 @@ export class Draft {
     const { step } = this.context;
     if (step === null || step.row.outcome !== null) return;
     Object.assign(step.row, { endUtcMs: at.utcMs, uEndS: at.uS, angleEndDeg: angleDeg, outcome });
-    if (step.row.kind === 'dwell') noteVerdict(this, step.row);
+    if (step.row.kind === 'dwell') step.row.good = true;
+    if (step.row.kind === 'dwell' && outcome === 'done') this.context.dwellsDone += 1;
     step.broken = outcome === 'cut short';
     noteRowClosed(this, step.row, step.motion !== null);
     this.saveRow(step.row);

@@ -4,9 +4,7 @@ import { swingMove } from '@/shared/protocol/durations';
 import type { Instant } from '../interfaces/clock';
 import type { Draft } from './draft';
 import { forgetPosition, noteHomed } from './position';
-import { cursorMoment } from './dwells';
-import { toleranceDeg } from './rows';
-import { endStanding, openSwing, sendMove, standingEndUtcMs, writeMark } from './steps';
+import { endStanding, openSwing, sendMove, standingEndUtcMs, toleranceDeg, writeMark } from './steps';
 import { LATE_MS, MOTION_GRACE_MS } from './timing';
 
 /** How a motion is followed: begun, refused, ended, finished. */
@@ -23,8 +21,7 @@ export function takeAhead(draft: Draft): void {
   context.step = null;
   context.ahead = null;
   for (;;) {
-    const { item, cursor } = advanceCursor(draft.start, context.cursor, cursorMoment(draft));
-    context.dwellJustNotGood = false;
+    const { item, cursor } = advanceCursor(draft.start, context.cursor, context.moment);
     if (item === null) return;
     context.cursor = cursor;
     if (item.step.kind === 'swing') {

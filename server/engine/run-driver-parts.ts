@@ -3,9 +3,8 @@ import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-recor
 import type { Clock } from '../interfaces/clock';
 import type { RunJournal } from '../interfaces/run-journal';
 import type { RunStore, StoredRun } from '../interfaces/run-store';
-import type { SampleReader } from '../interfaces/sample-reader';
 import type { TurntableLink } from '../interfaces/turntable-link';
-import type { Advance, Arm, RunEvent } from './run-context';
+import type { Arm } from './run-context';
 import type { RunFacts } from './run-facts';
 import type { OwnEffect } from './stored-snapshot';
 
@@ -19,8 +18,6 @@ export interface RunDriverParts {
   /** Opened and kept by its owner; the driver listens and sends. */
   link: TurntableLink;
   clock: Clock;
-  /** What was measured lately on the rig; absent where nothing ever is. */
-  samples?: SampleReader;
   sha256: Sha256;
   /** The arm of the rig now; null when nobody answers for it. */
   armNow(): Arm | null;
@@ -51,18 +48,3 @@ export type Answer =
       kept?: Promise<unknown>;
     }
   | { ok: false; why: string };
-
-/** Of what stands, the part that the chart keeps. */
-export const armGiven = (standing: Arm | null): Arm | null =>
-  standing === null ? null : { name: standing.name, untilUtcMs: standing.untilUtcMs };
-
-/** What is answered to whoever asked for an event, by the entries of the log that it made. */
-export function answerOf(result: Advance | null, event: RunEvent, kinds: { done: string; refused: string }): Answer {
-  if (result === null) return { ok: false, why: 'This server no longer drives the run.' };
-  const refusal = result.events.find(({ kind }) => kind === kinds.refused);
-  if (refusal !== undefined) return { ok: false, why: String(refusal.data['why']) };
-  const done = result.events.some(({ kind }) => kind === kinds.done);
-  return done ? { ok: true, serverAtUtcMs: event.at.utcMs } : { ok: false, why: 'The run is at something else now.' };
-}
-
-export const awayWords = 'The database does not answer at the moment; nothing is set in motion before it does.';

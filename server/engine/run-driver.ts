@@ -7,15 +7,18 @@ import { chained } from './chained';
 import { beginRun, deadlineOf, isArmExpected, isRunOver, isUnderWay, wantsMotion } from './chart';
 import { type Advance, CHART_VERSION, type Effect, type RunEvent, type RunSnapshot } from './run-context';
 import { advanceSafely } from './advance-safely';
-import { lookedInto } from './look';
 import { createPredictor, factsOf, mayResume, plannedDwells, type RunFacts, summaryOf, withDatabase } from './run-facts';
-import { type Answer, answerOf, armGiven, awayWords, type RunChange, type RunDriverParts } from './run-driver-parts';
+import type { Answer, RunChange, RunDriverParts } from './run-driver-parts';
 import { DATABASE_GRACE_MS, RunSaver } from './run-saver';
 import { ALIVE_MS, RunTimers } from './run-timers';
-import { LONGEST_BEAT_MS, SERVER_U_S } from './timing';
 import { isOwn, type OwnEffect, snapshotIn, type StoredSnapshot } from './stored-snapshot';
 
 type Item = { event: RunEvent; done?: (result: Advance | null) => void } | 'beat' | 'alive';
+
+/** Uncertainty of instants that the server itself stamps, s: the length of one turn of its loop (an estimate, no source). */
+const SERVER_U_S = 0.001;
+/** A loop that has not turned for so long is taken for stuck. */
+const LONGEST_BEAT_MS = 1500;
 
 /**
  * Drives one run: takes one event at a time through the chart, saves what came of it in one transaction, then performs the
@@ -43,7 +46,7 @@ export class RunDriver {
   private readonly unsubscribe: () => void;
   private dwellsPlanned: number | null = null;
 
-  constructor(private readonly parts: RunDriverParts) {
+  constructor(readonly parts: RunDriverParts) {
     const { start, stored, clock, link, store } = parts;
     this.runId = start.runId;
     this.snapshot = stored?.snapshot == null ? beginRun(start, clock.utcMs()) : snapshotIn(stored);
@@ -110,36 +113,33 @@ export class RunDriver {
   /** Answers when it is saved: it starts motion, so nothing goes to the controller before. */
   async resume(by: string): Promise<Answer> {
     const now = this.now();
-    if (this.mayNotWrite()) return { ok: false, why: awayWords };
-    const arm = armGiven(this.parts.armNow());
+    if (this.mayNotWrite())
+      return { ok: false, why: 'The database does not answer at the moment; nothing is set in motion before it does.' };
+    const standing = this.parts.armNow();
+    const arm = standing === null ? null : { name: standing.name, untilUtcMs: standing.untilUtcMs };
     const allowed = mayResume(this.parts.start, this.snapshot, { utcMs: now.utcMs, arm, lockedBy: this.lockedBy() });
     if (!allowed.ok) return { ok: false, why: allowed.why };
-    return this.answered({ type: 'resume', at: now, by, arm }, { done: 'resumed', refused: 'resume-refused' });
-  }
-
-  /** A person has done what the prompt asks for, and the rig was armed again; the next step may move. */
-  async confirmPrompt(by: string): Promise<Answer> {
-    const why = this.lockedBy() ?? (this.mayNotWrite() ? awayWords : null);
-    if (why !== null) return { ok: false, why };
-    const arm = armGiven(this.parts.armNow());
-    return this.answered(
-      { type: 'confirm-prompt', at: this.now(), by, arm },
-      { done: 'prompt-confirmed', refused: 'prompt-not-confirmed' },
-    );
-  }
-
-  private async answered(event: RunEvent, kinds: { done: string; refused: string }): Promise<Answer> {
-    return answerOf(await new Promise<Advance | null>((done) => this.enqueue({ event, done })), event, kinds);
+    const result = await new Promise<Advance | null>((done) => this.enqueue({ event: { type: 'resume', at: now, by, arm }, done }));
+    const refusal = result?.events.find(({ kind }) => kind === 'resume-refused');
+    if (result === null) return { ok: false, why: 'This server no longer drives the run.' };
+    if (refusal !== undefined) return { ok: false, why: String(refusal.data['why']) };
+    return { ok: true, serverAtUtcMs: now.utcMs };
   }
 
   facts(): RunFacts {
     const { start, armNow } = this.parts;
     const nowUtcMs = this.now().utcMs;
     this.dwellsPlanned ??= plannedDwells(start, this.snapshot.context.startedAtUtcMs ?? nowUtcMs);
-    const { snapshot, dwellsPlanned } = this;
-    const predictedEndUtcMs = this.predict(snapshot, nowUtcMs);
-    const standing = { arm: armNow(), lockedBy: this.lockedBy(), lastSeq: this.chain.seq };
-    const facts = factsOf({ start, snapshot, nowUtcMs, ...standing, predictedEndUtcMs, dwellsPlanned });
+    const facts = factsOf({
+      start,
+      snapshot: this.snapshot,
+      nowUtcMs,
+      arm: armNow(),
+      lockedBy: this.lockedBy(),
+      lastSeq: this.chain.seq,
+      predictedEndUtcMs: this.predict(this.snapshot, nowUtcMs),
+      dwellsPlanned: this.dwellsPlanned,
+    });
     return withDatabase(facts, this.databaseAwaySinceUtcMs);
   }
 
@@ -194,7 +194,8 @@ export class RunDriver {
 
   private actFirst(kind: 'hold' | 'stop', by: string): Answer {
     const at = this.now();
-    const id = this.actedId(kind, at.utcMs);
+    this.acted += 1;
+    const id = `${this.runId}-${kind}-${Math.round(at.utcMs)}-${this.acted}`;
     this.halting += 1;
     const releaseDrivers = this.parts.start.rig.motion?.safeWhenFree === true;
     const kept = new Promise((done) => {
@@ -205,12 +206,6 @@ export class RunDriver {
     this.saver.hurryUp();
     this.kick();
     return { ok: true, serverAtUtcMs: at.utcMs, kept };
-  }
-
-  /** Of a command that goes out before anything is saved. */
-  private actedId(kind: string, utcMs: number): string {
-    this.acted += 1;
-    return `${this.runId}-${kind}-${Math.round(utcMs)}-${this.acted}`;
   }
 
   private heard(link: LinkEvent): void {
@@ -274,8 +269,7 @@ export class RunDriver {
     this.snapshot = result.snapshot;
     this.chain = events.at(-1) ?? this.chain;
     for (const effect of result.effects) this.performEffect(effect);
-    this.beat();
-    this.timers.awaitDeadline(deadlineOf(this.snapshot));
+    this.armTimers();
     this.tell({ facts: this.facts(), steps: result.steps, events });
     if (isRunOver(this.snapshot)) this.finish();
   }
@@ -307,8 +301,6 @@ export class RunDriver {
   }
 
   private performEffect(effect: Effect): void {
-    // Answered at once, before what waits: the chart decides with what is known now.
-    if (effect.kind === 'look') return void this.inbox.unshift({ event: lookedInto(this.parts, effect.look, this.now()) });
     if (effect.kind !== 'link') return this.outside(() => this.parts.perform(effect));
     const { command } = effect;
     const startsMotion = command.kind !== 'hold' && command.kind !== 'stop';
@@ -345,8 +337,12 @@ export class RunDriver {
     if (this.closed) return;
     this.databaseAwaySinceUtcMs = sinceUtcMs;
     if (isRunOver(this.snapshot)) return;
-    const acted = wantsMotion(this.snapshot) ? this.actedId('away', sinceUtcMs) : null;
-    if (acted !== null) this.parts.link.send({ kind: 'hold', id: acted });
+    let acted: string | null = null;
+    if (wantsMotion(this.snapshot)) {
+      this.acted += 1;
+      acted = `${this.runId}-away-${Math.round(sinceUtcMs)}-${this.acted}`;
+      this.parts.link.send({ kind: 'hold', id: acted });
+    }
     this.inbox.unshift({ event: { type: 'database-away', at: this.now(), sinceUtcMs, acted } });
     this.kick();
   }
@@ -369,6 +365,11 @@ export class RunDriver {
   private beat(): void {
     this.lastBeatMs = this.parts.clock.monotonicMs();
     if (wantsMotion(this.snapshot)) this.timers.awaitBeat();
+  }
+
+  private armTimers(): void {
+    this.beat();
+    this.timers.awaitDeadline(deadlineOf(this.snapshot));
   }
 
   /** So that a restart knows how long nobody drove the run. */

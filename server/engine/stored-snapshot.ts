@@ -1,9 +1,9 @@
 import type { StoredRun } from '../interfaces/run-store';
-import { CHART_VERSION, type Effect, type RunContext, type RunSnapshot } from './run-context';
+import { CHART_VERSION, type Effect, type KnownPosition, type RunContext, type RunSnapshot } from './run-context';
 import { nothingKnown } from './position';
 
-/** What the driver performs itself, after it was saved: all but the commands to the controller and looks into the samples. */
-export type OwnEffect = Exclude<Effect, { kind: 'link' | 'look' }>;
+/** What the driver performs itself, after it was saved: all but the commands to the controller. */
+export type OwnEffect = Exclude<Effect, { kind: 'link' }>;
 
 /** Snapshot as stored, with what the next process has to know of this one. */
 export interface StoredSnapshot extends RunSnapshot {
@@ -13,24 +13,23 @@ export interface StoredSnapshot extends RunSnapshot {
   toPerform: OwnEffect[];
 }
 
-export const isOwn = (effect: Effect): effect is OwnEffect => effect.kind !== 'link' && effect.kind !== 'look';
+export const isOwn = (effect: Effect): effect is OwnEffect => effect.kind !== 'link';
 
 /**
  * Contexts of version 1 tell nothing of passes of the home edge: the count is unproved until the next one. Those of version 2 were never
- * written while the database was away; before version 4 no dwell was judged and nothing was waited for.
+ * written while the database was away.
  */
-type Newer = 'position' | 'databaseAwaySinceUtcMs' | 'dwellsGood' | 'dwells' | 'judging' | 'dwellJustNotGood' | 'waiting';
-type OldContext = Omit<RunContext, Newer> & Partial<Pick<RunContext, Newer>>;
+type OldContext = Omit<RunContext, 'position' | 'databaseAwaySinceUtcMs'> & {
+  position?: KnownPosition;
+  databaseAwaySinceUtcMs?: number | null;
+};
 
 /** A snapshot of this or an older version in the shape of this one; null where this version cannot read it. */
 export function restored(snapshot: unknown, chartVersion: number): RunSnapshot | null {
   if (snapshot === null || chartVersion < 1 || chartVersion > CHART_VERSION) return null;
   const { state, context } = snapshot as Omit<RunSnapshot, 'context'> & { context: OldContext };
-  const newer = {
-    ...{ position: nothingKnown, databaseAwaySinceUtcMs: null, dwellsGood: context.dwellsDone },
-    ...{ dwells: [], judging: null, dwellJustNotGood: false, waiting: null },
-  };
-  return { version: CHART_VERSION, state, context: { ...newer, ...context } };
+  const { position = nothingKnown, databaseAwaySinceUtcMs = null } = context;
+  return { version: CHART_VERSION, state, context: { ...context, position, databaseAwaySinceUtcMs } };
 }
 
 /** @throws Error when the store holds a snapshot of another version: the supervisor quarantines such runs before. */

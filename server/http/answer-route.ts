@@ -91,8 +91,8 @@ async function identify(
   req: Request,
   services: Services,
 ): Promise<{ me: SignedIn | null; membership: Membership | null }> {
-  if (contract.access === 'public' || contract.access === 'device') return { me: null, membership: null };
   const token = readSessionToken(req, services.config);
+  if (contract.access === 'public') return { me: null, membership: null };
   if (token === null) throw new ProblemError('not-signed-in', 'Sign in first; the request carries no session.');
   const labId = typeof req.params.labId === 'string' ? req.params.labId : '';
   const remembered = isIntervention(contract) ? services.access.remembered(token, labId) : null;

@@ -139,6 +139,7 @@ async function storeStart(
       start,
       protocolId: with_.begin.protocolId,
       massSetId: with_.massSetId,
+      startedById: caller.me.userId,
       state: 'starting' as const,
       nowUtcMs: services.clock.utcMs(),
       predictedEndUtcMs: with_.finishUtcMs,
@@ -189,8 +190,10 @@ export async function beginRehearsal(caller: Caller, begin: Begin & { seed: numb
     arm: null,
     simulated: { trueG: CODATA_2022_G.value, seed: begin.seed, rateHz: rehearsalRateHz, faults: [] },
   };
-  await services.database.db.transaction(async (tx) => {
-    await insertRun(tx, { start, protocolId: begin.protocolId, massSetId: null, state: 'rehearsing', nowUtcMs, predictedEndUtcMs: null });
+  const rehearsed = { runId: start.runId, protocolId: begin.protocolId, revision: begin.revision, seed: begin.seed };
+  await audited(caller, { kind: 'run.rehearsed', data: () => rehearsed }, async (tx) => {
+    const row = { start, protocolId: begin.protocolId, massSetId: null, startedById: caller.me.userId, nowUtcMs, predictedEndUtcMs: null };
+    await insertRun(tx, { ...row, state: 'rehearsing' });
     const payload: RehearsalJob = { labId: membership.labId, runId: start.runId };
     await enqueueJob(tx, { kind: rehearsalJobKind, payload, labId: membership.labId, nowUtcMs, maxAttempts: 2 });
   });

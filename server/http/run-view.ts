@@ -1,7 +1,6 @@
 import type { RunStart } from '@/shared/archive/run-records';
 import type { RunSummary, RunView } from '@/shared/contracts/runs';
-import type { WaitingView } from '@/shared/contracts/waiting';
-import { factsOf, plannedDwells, type RunFacts, type WaitingFacts } from '../engine/run-facts';
+import { factsOf, plannedDwells, type RunFacts } from '../engine/run-facts';
 import { restored } from '../engine/stored-snapshot';
 import { readSteps, type RunListRow, type RunRecord } from '../store/runs-read';
 import { isoOf, isoOrNull } from './maker';
@@ -49,9 +48,6 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
     dwellsDone: facts.dwellsDone,
     dwellsPlanned: facts.dwellsPlanned,
     holdAfterDwell: facts.holdAfterDwell,
-    dwellsGood: facts.dwellsGood,
-    waiting: facts.waiting === null ? null : waitingViewOf(facts.waiting),
-    reversal: facts.reversal,
     position: facts.position === null ? null : positionViewOf(start.rig, facts.position),
     intervention:
       facts.intervention === null
@@ -68,16 +64,6 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
     protocol: start.protocol,
     simulated:
       start.simulated === null ? null : { trueG: start.simulated.trueG, seed: start.simulated.seed, rateHz: start.simulated.rateHz },
-  };
-}
-
-function waitingViewOf({ kind, text, givesUpUtcMs, otherwise, firstLookUtcMs, found, mayConfirm }: WaitingFacts): WaitingView {
-  return {
-    ...{ kind, text, otherwise, mayConfirm },
-    givesUpAt: isoOrNull(givesUpUtcMs),
-    firstLookAt: isoOf(firstLookUtcMs),
-    samples: found?.samples ?? null,
-    readings: found?.readings ?? [],
   };
 }
 
@@ -100,6 +86,7 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
     runId: run.id,
     state: run.state,
     reason: run.failure ?? services.supervisor.quarantinedOf(run.rigId)?.why ?? '',
+    reasonCode: '',
     startedAtUtcMs: run.startedAt,
     endedAtUtcMs: run.endedAt,
     predictedEndUtcMs: run.predictedEndAt,
@@ -108,9 +95,6 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
     dwellsDone: steps.filter((step) => step.kind === 'dwell' && step.outcome === 'done').length,
     dwellsPlanned,
     holdAfterDwell: false,
-    dwellsGood: steps.filter((step) => step.kind === 'dwell' && step.outcome === 'done' && step.good !== false).length,
-    waiting: null,
-    reversal: null,
     position: null,
     intervention: null,
     mayResume: { ok: false, why: 'The run is not driven by this server.' },

@@ -10,8 +10,7 @@ import type { RigStation } from '../interfaces/rig-stations';
 import type { ControllerState } from '../interfaces/turntable-link';
 import type { RigRecord } from '../store/rigs';
 import { signaturesOf } from '../store/locks';
-import { activeRuns, type RunListRow } from '../store/runs-read';
-import { dataCheck } from './data-check';
+import { activeRuns, lastSampleUtcMs, type RunListRow } from '../store/runs-read';
 import type { Services } from './services';
 
 export interface StartPlan {
@@ -31,6 +30,9 @@ export interface StartReport {
   finishUtcMs: number;
   firstMove: string;
 }
+
+/** Deflection older than this means that nothing is arriving. */
+const freshMs = 60_000;
 
 const check = (code: string, title: string, outcome: { state: StartCheck['state']; detail: string }): StartCheck => ({
   code,
@@ -72,7 +74,7 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
     ),
     check('still', 'Turntable', stillCheck(controller)),
     check('protocol', 'Protocol on this rig', protocolCheck(plan, controller, nowUtcMs)),
-    check('data', 'Deflection', await dataCheck(services, plan, station)),
+    check('data', 'Deflection', await dataCheck(services, station, nowUtcMs)),
     check('free', 'No other run', freeCheck(services, plan.rig.id, runs.get(plan.rig.id))),
     check('lock', 'Nobody at the rig', lockCheck(services, plan)),
     check('armed', 'Armed on site', armedCheck(services, plan, timeline)),
@@ -113,6 +115,18 @@ function protocolCheck({ protocol, document, timeZone }: StartPlan, controller: 
   if (first === undefined) return pass('Every step can be carried out within the limits of the rig.');
   const more = others.length === 0 ? '' : ` (and ${String(others.length)} more)`;
   return fail(`${first.path === null ? '' : `Step ${first.path}: `}${first.message}${more}`);
+}
+
+/** A rig that fills its channel itself must be doing so; where data are brought in later nothing can be seen now. */
+async function dataCheck(services: Services, station: RigStation | null, nowUtcMs: number) {
+  if (station?.channel == null) return note('No deflection arrives by itself on this rig: bring the file in after the run.');
+  const last = await lastSampleUtcMs(services.database, { labId: station.labId, channelId: station.channel.id });
+  if (last !== null && nowUtcMs - last <= freshMs) return pass(`The channel ${station.channel.name} is being filled.`);
+  return fail(
+    last === null
+      ? `The channel ${station.channel.name} has no sample yet.`
+      : `The channel ${station.channel.name} has had no sample for ${String(Math.round((nowUtcMs - last) / 1000))} s.`,
+  );
 }
 
 function freeCheck(services: Services, rigId: string, run: RunListRow | undefined) {

@@ -10,7 +10,7 @@ export interface RigStation {
   settings: LinkSettings;
   link: TurntableLink;
   /** Channel that the rig itself fills; null where data come from outside. */
-  channel: { id: string; name: string; unit: string; /** Since when it flows without a break, UTC ms. */ sinceUtcMs: number } | null;
+  channel: { id: string; name: string; unit: string } | null;
   /** Arm key and door of a rig that is part of this server; null where they are real and turned at the rig. */
   virtual: VirtualInputs | null;
 }
@@ -32,7 +32,6 @@ export interface LiveSampleBatch {
   channelId: string;
   channel: string;
   unit: string;
-  rateHz: number;
   utcMs: Float64Array;
   value: Float64Array;
 }

@@ -20,6 +20,8 @@ export interface ServerConfig {
   webDir: string | null;
   smtpUrl: string | null;
   mailFrom: string;
+  /** Hosts (`name:port`) of the own network that a sign of life or a push message may go to, also without TLS; all others must be public and speak https. */
+  privateHosts: readonly string[];
   logLevel: 'silent' | 'fatal' | 'error' | 'warn' | 'info' | 'debug';
   limits: {
     /** Requests a minute and address, without hold and stop. */
@@ -29,11 +31,5 @@ export interface ServerConfig {
     jsonBytes: number;
     importBytes: number;
     streamsPerUser: number;
-  };
-  /** What each device may append. */
-  devices: {
-    batchBytes: number;
-    batchesPerMinute: number;
-    samplesPerMinute: number;
   };
 }

@@ -1,7 +1,7 @@
 import { and, desc, eq, inArray } from 'drizzle-orm';
 import { evaluations } from '@/db/schema';
 import type { EvaluationResult, FitCurve } from '@/shared/evaluation/result';
-import { one, type Database, type Handle } from './database';
+import { one, type Handle, type Transaction } from './database';
 import { enqueueJob } from './jobs';
 
 export type EvaluationRecord = typeof evaluations.$inferSelect;
@@ -15,21 +15,19 @@ export interface EvaluationJob {
 }
 
 /** Adds an evaluation and the job that works it off, both or neither. */
-export function queueEvaluation(
-  db: Database,
+export async function queueEvaluation(
+  tx: Transaction,
   evaluation: { labId: string; runId: string; channel: string | null; createdAt: number; createdBy: string },
 ): Promise<EvaluationRecord> {
-  return db.transaction(async (tx) => {
-    const row = one(
-      await tx
-        .insert(evaluations)
-        .values({ ...evaluation, state: 'queued' })
-        .returning(),
-    );
-    const payload: EvaluationJob = { labId: row.labId, evaluationId: row.id };
-    await enqueueJob(tx, { kind: evaluationJobKind, payload, labId: row.labId, nowUtcMs: evaluation.createdAt, maxAttempts: 3 });
-    return row;
-  });
+  const row = one(
+    await tx
+      .insert(evaluations)
+      .values({ ...evaluation, state: 'queued' })
+      .returning(),
+  );
+  const payload: EvaluationJob = { labId: row.labId, evaluationId: row.id };
+  await enqueueJob(tx, { kind: evaluationJobKind, payload, labId: row.labId, nowUtcMs: evaluation.createdAt, maxAttempts: 3 });
+  return row;
 }
 
 /** Evaluations of a run, newest first, without their curves. */

@@ -113,10 +113,18 @@ export class UnsuitableChannelError extends Error {
  */
 export function storeImport(
   connection: Connection,
-  work: { labId: string; importId: string; channel: WantedChannel; storedAt: number; mapping: z.infer<typeof importMappingSchema> },
+  work: {
+    labId: string;
+    importId: string;
+    channel: WantedChannel;
+    storedAt: number;
+    mapping: z.infer<typeof importMappingSchema>;
+    /** What has to be written in the same transaction when all is stored. */
+    also?: (handle: Handle, stored: number) => Promise<void>;
+  },
   fill: (take: (batch: SampleBatch) => Promise<void>) => Promise<void>,
 ): Promise<{ channel: ChannelRecord; stored: number; known: number }> {
-  const { labId, importId, channel: wanted, ...change } = work;
+  const { labId, importId, channel: wanted, also, ...change } = work;
   return connection.bulk(async (client, handle) => {
     // Two who commit the same import: the second waits here and then finds it stored.
     await handle
@@ -135,12 +143,12 @@ export function storeImport(
       sum.known += known;
     });
     await changeImport(handle, { labId, importId }, { ...change, state: 'stored', channelId: channel.id });
+    await also?.(handle, sum.stored);
     return sum;
   });
 }
 
-/** @throws ConflictingSamplesError where the channel holds another value at an instant of the batch */
-export async function assertSameValues(
+async function assertSameValues(
   client: PoolClient,
   { labId, channelId }: { labId: string; channelId: string },
   batch: SampleBatch,
@@ -173,7 +181,6 @@ export interface WantedChannel {
   unit: string;
   role: ChannelRecord['role'];
   source: ChannelRecord['source'];
-  rateHz?: number | null;
   createdAt: number;
 }
 

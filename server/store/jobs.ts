@@ -1,4 +1,4 @@
-import { and, eq, sql } from 'drizzle-orm';
+import { and, desc, eq, sql } from 'drizzle-orm';
 import { jobs } from '@/db/schema';
 import { timestampOfUtcMs } from '@/db/schema/columns';
 import type { Job, JobQueue } from '../interfaces/jobs';
@@ -21,6 +21,26 @@ export async function enqueueJob(
       .returning({ id: jobs.id }),
   );
   return row;
+}
+
+/** Work of a lab that was given up, newest first; house-keeping removes it after 30 days. */
+export const givenUpJobs = (db: Handle, labId: string) =>
+  db
+    .select()
+    .from(jobs)
+    .where(and(eq(jobs.labId, labId), eq(jobs.state, 'given-up')))
+    .orderBy(desc(jobs.finishedAt))
+    .limit(100);
+
+const retries = 3;
+
+/** Lets given-up work be tried again. False where the lab has no such job. The count of attempts goes on, for it fences workers off. */
+export async function retryGivenUpJob(db: Handle, job: { labId: string; jobId: string }, nowUtcMs: number): Promise<boolean> {
+  const done = await db
+    .update(jobs)
+    .set({ state: 'waiting', maxAttempts: sql`${jobs.attempts} + ${retries}`, dueAt: nowUtcMs, finishedAt: null })
+    .where(and(eq(jobs.labId, job.labId), eq(jobs.id, job.jobId), eq(jobs.state, 'given-up')));
+  return done.rowCount === 1;
 }
 
 /**

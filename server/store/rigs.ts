@@ -47,6 +47,12 @@ export const listRigs = (db: Handle, labId: string): Promise<RigRecord[]> =>
 /** Every rig of every lab: what a starting server drives. */
 export const allRigs = (db: Handle): Promise<RigRecord[]> => rigQuery(db).orderBy(asc(rigs.labId), asc(rigs.id));
 
+/** Names of the rigs of a lab by id. */
+export async function allRigNames(db: Handle, labId: string): Promise<Map<string, string>> {
+  const rows = await db.select({ id: rigs.id, name: rigs.name }).from(rigs).where(eq(rigs.labId, labId));
+  return new Map(rows.map(({ id, name }) => [id, name]));
+}
+
 export async function findRig(db: Handle, labId: string, rigId: string): Promise<RigRecord | null> {
   const [found] = await rigQuery(db).where(and(eq(rigs.labId, labId), eq(rigs.id, rigId)));
   return found ?? null;

@@ -14,6 +14,8 @@ export interface NewRun {
   start: RunStart;
   protocolId: string | null;
   massSetId: string | null;
+  /** Account of the operator; null where nobody in particular started it. */
+  startedById: string | null;
   state: RunState;
   nowUtcMs: number;
   predictedEndUtcMs: number | null;
@@ -34,6 +36,7 @@ export async function insertRun(db: Handle, run: NewRun): Promise<boolean> {
       rigRevision: start.rigRevision,
       protocolId: run.protocolId,
       massSetId: run.massSetId,
+      startedById: run.startedById,
       rehearsal: start.simulated !== null,
       start,
       state: run.state,

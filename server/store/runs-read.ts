@@ -21,6 +21,7 @@ const summaryColumns = {
   protocolRevision: runs.protocolRevision,
   massSetLabel: runs.massSetLabel,
   operator: runs.operator,
+  startedById: runs.startedById,
   lastSeq: runs.lastSeq,
   state: runs.state,
   outcome: runs.outcome,
@@ -113,13 +114,12 @@ export async function readSteps(db: Handle, run: { labId: string; runId: string 
 export async function readEvents(
   db: Handle,
   run: { labId: string; runId: string },
-  page: { afterSeq: number; limit?: number; kind?: string | undefined },
+  page: { afterSeq: number; limit?: number },
 ): Promise<ChainedEvent[]> {
-  const ofKind = page.kind === undefined ? undefined : eq(runEvents.kind, page.kind);
   const rows = await db
     .select()
     .from(runEvents)
-    .where(and(eq(runEvents.labId, run.labId), eq(runEvents.runId, run.runId), gt(runEvents.seq, page.afterSeq), ofKind))
+    .where(and(eq(runEvents.labId, run.labId), eq(runEvents.runId, run.runId), gt(runEvents.seq, page.afterSeq)))
     .orderBy(asc(runEvents.seq))
     .limit(page.limit ?? 1_000_000);
   return rows.map(({ labId: _lab, runId: _run, ...event }) => event);

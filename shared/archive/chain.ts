@@ -36,9 +36,9 @@ export function appendEvent(head: ChainHead, event: NewEvent, sha256: Sha256): C
 
 export type ChainCheck = { valid: true; events: number; head: ChainHead } | { valid: false; seq: number; why: string };
 
-/** Follows a chain from its first event and says at which `seq` it breaks, if it does. */
-export function verifyChain(events: Iterable<ChainedEvent>, sha256: Sha256): ChainCheck {
-  let head = emptyChain;
+/** Follows a chain from its first event, or from the one after a head that was verified before, and says at which `seq` it breaks, if it does. */
+export function verifyChain(events: Iterable<ChainedEvent>, sha256: Sha256, from: ChainHead = emptyChain): ChainCheck {
+  let head = from;
   for (const event of events) {
     const expectedSeq = head.seq + 1;
     if (event.seq !== expectedSeq)

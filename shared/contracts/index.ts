@@ -1,5 +1,6 @@
+import * as alarms from './alarms';
+import * as calls from './calls';
 import * as data from './data';
-import * as devices from './devices';
 import * as doors from './doors';
 import * as evaluations from './evaluations';
 import * as link from './link';
@@ -12,6 +13,7 @@ import * as runs from './runs';
 import * as schedules from './schedules';
 import * as service from './service';
 import * as standing from './standing';
+import * as work from './work';
 
 const isRoute = (value: unknown): value is RouteContract =>
   typeof value === 'object' && value !== null && 'method' in value && 'path' in value && 'access' in value;
@@ -29,6 +31,8 @@ export const routes: readonly RouteContract[] = [
   schedules,
   doors,
   data,
-  devices,
   evaluations,
+  work,
+  alarms,
+  calls,
 ].flatMap((module) => Object.values(module).filter(isRoute));

@@ -4,14 +4,49 @@ import { rigDocumentSchema } from '../rig/document';
 import { idSchema, instantSchema, pageOf, pageQuerySchema } from './common';
 import { positionViewSchema } from './position';
 import { defineRoute } from './route';
-import { chainedEventSchema, interventionSchema, stepRowViewSchema } from './run-rows';
-import { reversalSoFarSchema, waitingSchema } from './waiting';
-
-export type { StepRowView } from './run-rows';
 
 export const runStates = ['rehearsing', 'starting', 'running', 'holding', 'held', 'stopping', 'finished', 'stopped', 'failed'] as const;
 export const runStateSchema = z.enum(runStates);
 export type RunState = z.infer<typeof runStateSchema>;
+
+/** The three honest stages of hold and stop: sent (the phone's own), the server has it, the controller confirmed. */
+export const interventionSchema = z.strictObject({
+  kind: z.enum(['hold', 'hold-after-dwell', 'resume', 'stop']),
+  by: z.string(),
+  serverAt: instantSchema,
+  /** When the controller itself said that the turntable stands still; null until then. */
+  confirmedAt: instantSchema.nullable(),
+});
+
+export const stepRowViewSchema = z.strictObject({
+  seq: z.number().int(),
+  path: z.string(),
+  kind: z.string(),
+  label: z.string(),
+  station: z.string(),
+  plannedStartUtcMs: z.number(),
+  plannedEndUtcMs: z.number().nullable(),
+  startUtcMs: z.number(),
+  endUtcMs: z.number().nullable(),
+  uStartS: z.number(),
+  uEndS: z.number().nullable(),
+  angleStartDeg: z.number().nullable(),
+  angleEndDeg: z.number().nullable(),
+  outcome: z.enum(['done', 'cut short', 'skipped', 'failed', 'late']).nullable(),
+  angleSource: z.enum(['counted', 'edge-verified', 'encoder']),
+  uAngleDeg: z.number().nullable(),
+  good: z.boolean().nullable(),
+});
+export type StepRowView = z.infer<typeof stepRowViewSchema>;
+
+export const chainedEventSchema = z.strictObject({
+  seq: z.number().int(),
+  at: z.string(),
+  kind: z.string(),
+  data: z.record(z.string(), z.unknown()),
+  prev: z.string(),
+  hash: z.string(),
+});
 
 export const runSummarySchema = z.strictObject({
   id: idSchema,
@@ -41,12 +76,6 @@ export const runViewSchema = runSummarySchema.extend({
   dwellsDone: z.number().int(),
   dwellsPlanned: z.number().int(),
   holdAfterDwell: z.boolean(),
-  /** Of the dwells done, those that count. */
-  dwellsGood: z.number().int(),
-  /** What the present step waits for; null where it ends by plan. */
-  waiting: waitingSchema.nullable(),
-  /** What the run has reached: near minus far so far, from the good dwells; null before there is a reversal. */
-  reversal: reversalSoFarSchema.nullable(),
   /** How well the counted angle is proved; null where the engine has kept nothing of the run. */
   position: positionViewSchema.nullable(),
   intervention: interventionSchema.nullable(),
@@ -71,9 +100,6 @@ const runProgressSchema = runViewSchema.pick({
   dwellsDone: true,
   dwellsPlanned: true,
   holdAfterDwell: true,
-  dwellsGood: true,
-  waiting: true,
-  reversal: true,
   position: true,
   intervention: true,
   mayResume: true,
@@ -219,18 +245,6 @@ export const resumeRun = defineRoute({
   body: z.strictObject(motionFields),
   problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'not-reviewed', 'locked', 'key-reused', 'still-running'],
 });
-export const confirmPrompt = defineRoute({
-  name: 'confirmPrompt',
-  summary: 'Confirm that what a prompt asks for is done, after the rig was armed again; the run goes on at once',
-  method: 'POST',
-  path: `${path}/confirm-prompt`,
-  access: 'prompt.confirm',
-  status: 202,
-  idempotent: true,
-  body: z.strictObject({ tappedAt: instantSchema }),
-  response: accepted,
-  problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'locked', 'key-reused', 'still-running'],
-});
 export const stopRun = intervention('stop', { name: 'stopRun', summary: 'Stop: decelerate and end the run', access: 'run.stop' });
 export const liveRun = defineRoute({
   name: 'liveRun',
@@ -269,7 +283,7 @@ export const listEvents = defineRoute({
   path: `${path}/events`,
   access: 'read',
   status: 200,
-  query: pageQuerySchema.extend({ kind: z.string().max(60).optional() }),
+  query: pageQuerySchema,
   response: pageOf(chainedEventSchema),
   problems: ['invalid-input', 'not-found'],
 });

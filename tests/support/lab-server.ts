@@ -42,6 +42,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
   webDir: null,
   smtpUrl: null,
   mailFrom: 'Evenfall <evenfall@quillfen.example>',
+  privateHosts: [],
   logLevel: 'silent',
   limits: {
     requestsPerMinute: 1_000_000,
@@ -50,7 +51,6 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
     importBytes: 4_194_304,
     streamsPerUser: 6,
   },
-  devices: { batchBytes: 1_048_576, batchesPerMinute: 120, samplesPerMinute: 120_000 },
   ...changes,
 });
 

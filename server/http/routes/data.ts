@@ -4,15 +4,17 @@ import type { ChannelView, ImportView } from '@/shared/contracts/data';
 import { sniffCsv, UnreadableFile } from '@/server/ingest/csv-sniff';
 import { FileTooLarge, FileWatch } from '@/server/ingest/receive-file';
 import * as store from '@/server/store/imports';
+import type { Handle } from '@/server/store/database';
 import { findRig } from '@/server/store/rigs';
 import { channelsOfRun, countSamples, extremesOf, findRun, type RunRecord } from '@/server/store/runs-read';
+import { enterAudit } from '../audited';
 import { assertMapping, checkViewOf, readImport } from '../import-steps';
 import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
 import type { Services } from '../services';
 
-export const channelViewOf = (channel: store.ChannelRecord): ChannelView => ({
+const channelViewOf = (channel: store.ChannelRecord): ChannelView => ({
   id: channel.id,
   rigId: channel.rigId,
   name: channel.name,
@@ -20,7 +22,6 @@ export const channelViewOf = (channel: store.ChannelRecord): ChannelView => ({
   unit: channel.unit,
   role: channel.role,
   source: channel.source,
-  rateHz: channel.rateHz,
 });
 
 const importViewOf = (file: store.ImportRecord): ImportView => ({
@@ -146,7 +147,8 @@ export const dataRoutes = [
     return checkViewOf(await readImport(services, { file, run: await loadRun(services, file.labId, file.runId), mapping: body.mapping }));
   }),
 
-  mount(contracts.commitImport, async ({ params, membership, services, body }) => {
+  mount(contracts.commitImport, async (context) => {
+    const { params, membership, services, body } = context;
     const file = await loadImport(services, membership.labId, params.importId);
     assertReceived(file);
     assertMapping(body.mapping);
@@ -164,10 +166,12 @@ export const dataRoutes = [
       source: 'import',
       createdAt: nowUtcMs,
     };
+    const also = (handle: Handle, stored: number) =>
+      enterAudit(handle, context, { kind: 'run.data-imported', data: { runId: run.id, importId: file.id, channelName, stored } });
     try {
       const done = await store.storeImport(
         services.database,
-        { labId: file.labId, importId: file.id, channel, storedAt: nowUtcMs, mapping },
+        { labId: file.labId, importId: file.id, channel, storedAt: nowUtcMs, mapping, also },
         async (take) => {
           const reading = await readImport(services, { file, run, mapping }, take);
           if (!reading.ok) throw unreadable(file, reading);

@@ -3,6 +3,7 @@ import type { EvaluationView } from '@/shared/contracts/evaluations';
 import * as store from '@/server/store/evaluations';
 import { channelsOfRun, countSamples, findRun, type RunRecord } from '@/server/store/runs-read';
 import { assertEnded } from '../archive-input';
+import { audited } from '../audited';
 import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
@@ -54,17 +55,14 @@ async function channelToEvaluate(services: Services, run: RunRecord, asked: stri
 }
 
 export const evaluationRoutes = [
-  mount(contracts.startEvaluation, async ({ params, body, me, membership, services }) => {
+  mount(contracts.startEvaluation, async (context) => {
+    const { params, body, me, membership, services } = context;
     const run = await loadRun(services, membership.labId, params.runId);
     assertEnded(run);
     const channel = await channelToEvaluate(services, run, body.channel);
-    const evaluation = await store.queueEvaluation(services.database.db, {
-      labId: run.labId,
-      runId: run.id,
-      channel,
-      createdAt: services.clock.utcMs(),
-      createdBy: me.name,
-    });
+    const wanted = { labId: run.labId, runId: run.id, channel, createdAt: services.clock.utcMs(), createdBy: me.name };
+    const entry = { kind: 'run.evaluation-asked', data: ({ id }: { id: string }) => ({ runId: run.id, evaluationId: id, channel }) };
+    const evaluation = await audited(context, entry, (tx) => store.queueEvaluation(tx, wanted));
     services.pokeJobs();
     return viewOf(evaluation);
   }),

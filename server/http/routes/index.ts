@@ -1,7 +1,8 @@
 import type { MountedRoute } from '../route-context';
+import { alarmRoutes } from './alarms';
 import { armingRoutes } from './arming';
+import { callRoutes } from './calls';
 import { dataRoutes } from './data';
-import { deviceRoutes } from './devices';
 import { doorRoutes } from './doors';
 import { evaluationRoutes } from './evaluations';
 import { lineRoutes } from './line';
@@ -12,6 +13,7 @@ import { rigRoutes } from './rigs';
 import { runRoutes } from './runs';
 import { scheduleRoutes } from './schedules';
 import { serviceRoutes } from './service';
+import { workRoutes } from './work';
 
 /** Every route of the API with the function that answers it. */
 export const allRoutes: readonly MountedRoute[] = [
@@ -26,6 +28,8 @@ export const allRoutes: readonly MountedRoute[] = [
   ...scheduleRoutes,
   ...doorRoutes,
   ...dataRoutes,
-  ...deviceRoutes,
   ...evaluationRoutes,
+  ...workRoutes,
+  ...alarmRoutes,
+  ...callRoutes,
 ];

@@ -6,6 +6,7 @@ import { checkProtocol } from '@/shared/protocol/check';
 import type { Step } from '@/shared/protocol/document';
 import * as store from '@/server/store/protocols';
 import { findRig } from '@/server/store/rigs';
+import { audited } from '../audited';
 import { isoOf, makerOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { refusalOf } from '../refused-protocol';
@@ -70,7 +71,10 @@ export const protocolRoutes = [
 
   mount(contracts.createProtocol, async (context) => {
     const { membership, services, body } = context;
-    const id = await store.createProtocol(services.database.db, { labId: membership.labId, document: body.document }, makerOf(context));
+    const entry = { kind: 'protocol.made', data: (protocolId: string) => ({ protocolId, name: body.document.name }) };
+    const id = await audited(context, entry, (tx) =>
+      store.createProtocol(tx, { labId: membership.labId, document: body.document }, makerOf(context)),
+    );
     const protocol = await load(services, membership.labId, id);
     context.setEtag(versionOf(protocol));
     return viewOf(services, protocol);
@@ -95,13 +99,18 @@ export const protocolRoutes = [
     return viewOf(services, after);
   }),
 
-  mount(contracts.deleteProtocol, async ({ params, membership, services }) => {
+  mount(contracts.deleteProtocol, async (context) => {
+    const { params, membership, services } = context;
     const protocol = await load(services, membership.labId, params.protocolId);
-    if (await store.deleteProtocol(services.database.db, membership.labId, protocol.id)) return undefined;
-    throw new ProblemError(
-      'not-possible-now',
-      `${protocol.name} has issued revisions, which runs may refer to; only a protocol that was never issued can be deleted.`,
-    );
+    const entry = { kind: 'protocol.deleted', data: () => ({ protocolId: protocol.id, name: protocol.name }) };
+    await audited(context, entry, async (tx) => {
+      if (await store.deleteProtocol(tx, membership.labId, protocol.id)) return;
+      throw new ProblemError(
+        'not-possible-now',
+        `${protocol.name} has issued revisions, which runs may refer to; only a protocol that was never issued can be deleted.`,
+      );
+    });
+    return undefined;
   }),
 
   mount(contracts.issueRevision, async (context) => {
@@ -119,21 +128,25 @@ export const protocolRoutes = [
       );
     const refusal = refusalOf(checkProtocol(protocol.document, rig.document));
     if (refusal !== null) throw refusal;
-    const revision = await store.issueRevision(
-      db,
-      {
-        labId: membership.labId,
-        protocolId: protocol.id,
-        draftVersion: protocol.version,
-        document: protocol.document,
-        sha256: services.sha256(canonicalize(protocol.document) ?? ''),
-        note: body.note,
-        rigId: rig.id,
-        rigRevision: rig.revision,
-      },
-      makerOf(context),
-    );
-    if (revision === null) throw editedMeanwhile(await load(services, membership.labId, protocol.id), membership);
+    const wanted = {
+      labId: membership.labId,
+      protocolId: protocol.id,
+      draftVersion: protocol.version,
+      document: protocol.document,
+      sha256: services.sha256(canonicalize(protocol.document) ?? ''),
+      note: body.note,
+      rigId: rig.id,
+      rigRevision: rig.revision,
+    };
+    const entry = {
+      kind: 'protocol.issued',
+      data: ({ number, sha256 }: store.RevisionRecord) => ({ protocolId: protocol.id, revision: number, sha256 }),
+    };
+    const revision = await audited(context, entry, async (tx) => {
+      const issued = await store.issueRevision(tx, wanted, makerOf(context));
+      if (issued === null) throw editedMeanwhile(await load(services, membership.labId, protocol.id), membership);
+      return issued;
+    });
     context.setEtag(versionOf(protocol));
     return revisionOf(revision);
   }),

@@ -186,21 +186,6 @@ const interventionRoutes = [
     return accepted(services, params.runId, answer);
   }),
 
-  mount(contracts.confirmPrompt, async (context) => {
-    const { params, body, me, membership, services } = context;
-    const driver = await driverOf(services, membership.labId, params.runId);
-    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'confirm');
-    const { rigId } = (services.activeRuns.find(membership.labId, params.runId) ?? { run: { rigId: '' } }).run;
-    const answer = await driver.confirmPrompt(me.name);
-    if (!answer.ok) {
-      const locked = services.locks.lockedBy(rigId) !== null;
-      const disarmed = driver.facts().waiting?.kind === 'prompt' && services.arms.armOf(rigId) === null;
-      throw new ProblemError(locked ? 'locked' : disarmed ? 'not-armed' : 'not-possible-now', answer.why);
-    }
-    auditLater(context, 'run.prompt-confirmed', { runId: params.runId });
-    return accepted(services, params.runId, answer);
-  }),
-
   mount(contracts.stopRun, async (context) => {
     const { params, me, membership, services } = context;
     const found = services.activeRuns.find(membership.labId, params.runId);
@@ -255,8 +240,7 @@ const recordRoutes = [
   mount(contracts.listEvents, async ({ params, query, membership, services }) => {
     const run = await load(services, membership.labId, params.runId);
     const [afterSeq] = decodeCursor(query.cursor, ['number']) ?? [0];
-    const page = { afterSeq, limit: query.limit + 1, kind: query.kind };
-    const events = await store.readEvents(services.database.db, { labId: run.labId, runId: run.id }, page);
+    const events = await store.readEvents(services.database.db, { labId: run.labId, runId: run.id }, { afterSeq, limit: query.limit + 1 });
     return pageFrom(events, query.limit, (event) => [event.seq]);
   }),
 

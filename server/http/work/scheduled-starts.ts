@@ -2,6 +2,7 @@ import { may } from '@/shared/contracts/roles';
 import { formatDayAndClock } from '@/shared/lib/format-time';
 import { occurrencesBetween } from '@/shared/schedule/occurrences';
 import { againstRoom } from '@/shared/schedule/room';
+import { reportCondition } from '@/server/store/alarms';
 import { appendAudit } from '@/server/store/audit';
 import { askForScheduleMail } from '@/server/store/mail-requests';
 import { memberOf } from '@/server/store/people';
@@ -65,7 +66,7 @@ async function startOne(services: Services, planned: Planned, dueUtcMs: number):
   const late = nowUtcMs - dueUtcMs > latestMs;
   if (services.stations.get(schedule.rigId) === null && !late) return false;
   const missed = async (why: string) => {
-    if (await store.decideStart(db, start, { outcome: 'missed', why, nowUtcMs })) await tellMissed(services, start);
+    if (await store.decideStart(db, start, { outcome: 'missed', why, nowUtcMs })) await tellMissed(services, schedule, { start, why });
     return true;
   };
   if (late) return missed(`No server drove the rig at ${formatDayAndClock(dueUtcMs, room.timeZone)}.`);
@@ -80,7 +81,7 @@ async function startOne(services: Services, planned: Planned, dueUtcMs: number):
     if (!(error instanceof ProblemError)) services.log.error({ err: error, scheduleId: schedule.id }, 'a scheduled start failed');
     const why = error instanceof ProblemError ? error.message : 'The server failed to start it; its log says why.';
     await store.concludeStart(db, start, { outcome: 'missed', why, runId: null });
-    await tellMissed(services, start);
+    await tellMissed(services, schedule, { start, why });
   }
   return true;
 }
@@ -113,16 +114,32 @@ async function announceMissingArm(services: Services, { schedule, room }: Planne
   const { db } = services.database;
   const soon = occurrencesBetween(schedule.plan, room.timeZone, { afterUtcMs: nowUtcMs, untilUtcMs: nowUtcMs + announcedMs });
   if (services.stations.get(schedule.rigId) === null) return;
+  let unarmedUtcMs: number | null = null;
   for (const { dueUtcMs } of soon) {
     const arm = services.arms.armOf(schedule.rigId);
     if (arm !== null && arm.untilUtcMs > stayOf(schedule, room, dueUtcMs).endUtcMs) continue;
     const start = { labId: schedule.labId, scheduleId: schedule.id, dueAt: dueUtcMs };
+    unarmedUtcMs ??= dueUtcMs;
     if (await store.announceStart(db, start, nowUtcMs)) await askForScheduleMail(db, { ...start, what: 'not-armed' }, nowUtcMs);
   }
+  const place = { labId: schedule.labId, rigId: schedule.rigId, code: 'not-armed' as const, subject: schedule.id };
+  const due = unarmedUtcMs === null ? '' : formatDayAndClock(unarmedUtcMs, room.timeZone);
+  const words = `${schedule.protocolName} is to start ${due}.`;
+  await db.transaction((tx) => reportCondition(tx, place, { met: unarmedUtcMs !== null, words, runId: null, utcMs: nowUtcMs }));
 }
 
-function tellMissed(services: Services, start: store.StartKey): Promise<unknown> {
-  return askForScheduleMail(services.database.db, { ...start, what: 'missed' }, services.clock.utcMs());
+async function tellMissed(
+  services: Services,
+  { rigId, protocolName }: store.ScheduleRecord,
+  missed: { start: store.StartKey; why: string },
+): Promise<void> {
+  const { start, why } = missed;
+  const utcMs = services.clock.utcMs();
+  await services.database.db.transaction(async (tx) => {
+    await askForScheduleMail(tx, { ...start, what: 'missed' }, utcMs);
+    const place = { labId: start.labId, rigId, code: 'missed-start' as const, subject: start.scheduleId };
+    await reportCondition(tx, place, { met: true, words: `${protocolName}: ${why}`, runId: null, utcMs });
+  });
 }
 
 const hasMore = ({ plan }: store.ScheduleRecord, timeZone: string, nowUtcMs: number): boolean =>

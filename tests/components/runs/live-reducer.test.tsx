@@ -36,9 +36,6 @@ describe('what arrives', () => {
       position,
       intervention,
       mayResume,
-      dwellsGood,
-      waiting,
-      reversal,
     } = viewAt(nowUtcMs);
     const same = {
       startedAt,
@@ -51,9 +48,6 @@ describe('what arrives', () => {
       position,
       intervention,
       mayResume,
-      dwellsGood,
-      waiting,
-      reversal,
     };
     const [, row] = rowsAt(nowUtcMs);
     const progress = (lastSeq: number, change: Partial<{ state: 'held'; reason: string }>): LiveMessage => ({

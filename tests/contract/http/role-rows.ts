@@ -46,6 +46,7 @@ const run = ({ labId, runId }: Things) => ({ labId, runId });
 const protocol = ({ labId, protocolId }: Things) => ({ labId, protocolId });
 const file = ({ labId, importId }: Things) => ({ labId, importId });
 const nobody = randomUUID();
+const alarm = ({ labId }: Things) => ({ labId, alarmId: nobody });
 const tapped = { tappedAt: '2031-02-14T20:00:00Z', reviewToken: 'none' };
 
 /** One row for every route of the API; a route without a row fails the test of the matrix. */
@@ -121,7 +122,6 @@ export const rows: Readonly<Record<string, Row>> = {
   holdRun: { params: run, body: () => ({}), allowed: 409 },
   holdAfterDwell: { params: run, body: () => ({}), allowed: 409 },
   resumeRun: { params: run, body: () => tapped, allowed: 409 },
-  confirmPrompt: { params: run, body: () => ({ tappedAt: tapped.tappedAt }), allowed: 409 },
   reviewStart: { params: rig, body: ({ protocolId, massSetId }) => ({ protocolId, revision: 1, massSetId }), allowed: 201 },
   reviewResume: { params: run, allowed: 409 },
   stopRun: { params: run, body: () => ({}), allowed: 409 },
@@ -162,15 +162,36 @@ export const rows: Readonly<Record<string, Row>> = {
   checkImport: { params: file, body: () => ({ mapping }), allowed: 200 },
   commitImport: { params: file, body: () => ({ mapping: { ...mapping, valueColumn: 0 }, channelName: 'readout' }), allowed: 400 },
   readSamples: { params: run, allowed: 200 },
-  listDevices: { params: rig, allowed: 200 },
-  makeDeviceToken: {
-    params: rig,
-    body: () => ({ name: 'Tracker', channels: [{ name: `spot ${randomUUID()}`, role: 'deflection', unit: 'mm', rateHz: 10 }] }),
-    allowed: 201,
-  },
-  revokeDeviceToken: { params: (things) => ({ ...rig(things), tokenId: nobody }), allowed: 404 },
-  appendSamples: { raw: '{"time_utc": "2031-02-14T20:00:00Z", "value": 1}', allowed: 401 },
   startEvaluation: { params: run, body: () => ({ channel: 'no such channel' }), allowed: 422 },
   listEvaluations: { params: run, allowed: 200 },
+  listGivenUpJobs: { params: lab, allowed: 200 },
+  retryJob: { params: ({ labId }) => ({ labId, jobId: nobody }), allowed: 404 },
+  listAlarms: { params: lab, allowed: 200 },
+  getAlarm: { params: alarm, allowed: 404 },
+  acknowledgeAlarm: { params: alarm, allowed: 404 },
+  confirmAlarm: { params: alarm, body: () => ({ note: 'looked at the belt' }), allowed: 404 },
+  resetAlarm: { params: alarm, allowed: 404 },
+  shelveAlarm: { params: alarm, body: () => ({ forMin: 30, reason: 'the painters are in' }), allowed: 404 },
+  unshelveAlarm: { params: alarm, allowed: 404 },
+  takeAlarmOut: { params: alarm, body: () => ({ reason: 'the sensor is away' }), allowed: 404 },
+  returnAlarm: { params: alarm, allowed: 404 },
+  listAlarmHistory: { params: lab, allowed: 200 },
+  countAlarms: { params: lab, allowed: 200 },
+  listChannelLimits: { params: rig, allowed: 200 },
+  addChannelLimit: { params: rig, body: () => ({ channelId: nobody, limit: { kind: 'silence', atMostS: 60 } }), allowed: 404 },
+  removeChannelLimit: { params: (things) => ({ ...rig(things), limitId: nobody }), allowed: 404 },
+  getOnCall: { params: lab, allowed: 200 },
+  changeOnCall: { params: lab, body: () => ({ order: [] }), allowed: 200 },
+  changeOwnCall: { params: lab, body: () => ({ doNotRing: { from: '22:00', until: '06:00' } }), allowed: 200 },
+  tryCall: { params: lab, allowed: 200 },
+  getWatcher: { params: lab, allowed: 200 },
+  changeWatcher: { params: lab, body: () => ({ url: null }), allowed: 200 },
+  getPushKey: { allowed: 200 },
+  listPushDevices: { allowed: 200 },
+  addPushDevice: {
+    body: () => ({ endpoint: 'http://127.0.0.1/push', keys: { p256dh: 'B'.repeat(87), auth: 'A'.repeat(22) }, device: 'A browser' }),
+    allowed: 400,
+  },
+  removePushDevice: { params: () => ({ deviceId: nobody }), allowed: 404 },
   getEvaluation: { params: ({ labId, evaluationId }) => ({ labId, evaluationId }), allowed: 200 },
 };

@@ -107,9 +107,9 @@ const testConfig = (stateDir: string, changes: Partial<ServerConfig>): ServerCon
   webDir: null,
   smtpUrl: null,
   mailFrom: 'Evenfall <evenfall@quillfen.example>',
+  privateHosts: [],
   logLevel: 'silent',
   limits: { requestsPerMinute: 100_000, interventionsPerMinute: 1000, jsonBytes: 100_000, importBytes: 100_000, streamsPerUser: 6 },
-  devices: { batchBytes: 1000, batchesPerMinute: 10, samplesPerMinute: 100 },
   ...changes,
 });
 

@@ -95,5 +95,13 @@ export const runStart = (labId: string, rigId: string, changes: Partial<RunStart
 });
 
 export async function makeRun(db: Database, start: RunStart): Promise<boolean> {
-  return insertRun(db, { start, protocolId: null, massSetId: null, state: 'starting', nowUtcMs: eveningUtcMs, predictedEndUtcMs: null });
+  return insertRun(db, {
+    start,
+    protocolId: null,
+    massSetId: null,
+    startedById: null,
+    state: 'starting',
+    nowUtcMs: eveningUtcMs,
+    predictedEndUtcMs: null,
+  });
 }

@@ -1,0 +1,38 @@
+#!/usr/bin/env node
+/**
+ * Runs one of the commands that look after a lab's database: audit-verify. The database is that of DATABASE_URL; without it that of
+ * `npm start`, which is started for the while where it does not run.
+ */
+import { join } from 'node:path';
+import { startCluster } from './lib/cluster.mjs';
+import { ensureDebianPackages } from './lib/debian.mjs';
+import { ensureNodeModules } from './lib/node-modules.mjs';
+import { root, state } from './lib/paths.mjs';
+import { pass } from './lib/run.mjs';
+import { giveUp } from './lib/say.mjs';
+
+const commands = ['audit-verify'];
+const [name, ...args] = process.argv.slice(2);
+if (!commands.includes(name)) giveUp(`unknown command ${name}: ${commands.join(', ')}`);
+await ensureNodeModules();
+const own = process.env.DATABASE_URL === undefined || process.env.DATABASE_URL === '' ? await ownDatabase() : null;
+process.exitCode = await pass(
+  process.execPath,
+  ['--import', join(root, 'node_modules/tsx/dist/loader.mjs'), join(root, 'server', 'boot', `${name}.ts`), ...args],
+  {
+    cwd: process.env.INIT_CWD ?? process.cwd(),
+    env: {
+      EVENFALL_STATE_DIR: state,
+      ...process.env,
+      ...(own === null ? {} : { DATABASE_URL: own.url }),
+      TSX_TSCONFIG_PATH: join(root, 'tsconfig.json'),
+    },
+  },
+);
+if (own !== null && !own.cluster.wasRunning) await own.cluster.stop();
+
+async function ownDatabase() {
+  await ensureDebianPackages(['postgresql']);
+  const cluster = await startCluster('lab');
+  return { cluster, url: await cluster.ensureDatabase('evenfall') };
+}

@@ -1,0 +1,281 @@
+import type { AlarmCode } from '@/shared/alarms/catalog';
+import type { RunChange } from '../../engine/run-driver-parts';
+import type { RunDriver } from '../../engine/run-driver';
+import type { Cancel } from '../../interfaces/clock';
+import type { RigStation } from '../../interfaces/rig-stations';
+import type { LinkEvent } from '../../interfaces/turntable-link';
+import { actOnAlarm, reportCondition, type AlarmPlace } from '../../store/alarms';
+import { dueAlarms, metAlarms } from '../../store/alarms-read';
+import { limitsOfRig } from '../../store/channel-limits';
+import { allRigs, type RigRecord } from '../../store/rigs';
+import { channelsOfRun, lastSampleUtcMs } from '../../store/runs-read';
+import type { Services } from '../services';
+import { excursionCondition, lateCondition, limitConditions } from './channel-conditions';
+import { conditionsOf, type Condition } from './rig-conditions';
+
+/** How often the rigs are looked at when nothing happens, ms. */
+const usualPaceMs = 5_000;
+/** Every so many looks those that need the database too. */
+const slowEvery = 6;
+const leastFree = 0.1;
+
+export interface WatchParts {
+  services: Services;
+  paceMs?: number | undefined;
+  /** Part of the disk that is free, 0 to 1; null where it cannot be told. */
+  freeDisk(): Promise<number | null>;
+}
+
+type Place = Omit<AlarmPlace, 'labId'> & { labId: string };
+const keyOf = ({ code, subject }: { code: string; subject: string }) => `${code} ${subject}`;
+
+/** What was last told of a place and holds there. */
+interface Known {
+  /** Those that the database believes to hold, by kind and subject; null before it was asked. */
+  met: Set<string> | null;
+  slow: Condition[];
+}
+
+/**
+ * Looks at the rigs that this process drives and at the server itself, and takes into the database what has changed: which conditions hold
+ * that did not, and which hold no more. What cannot be stored now is told at the next look.
+ */
+export class AlarmWatch {
+  private readonly known = new Map<string, Known>();
+  private readonly open = new Map<string, { interlock: boolean; supply: boolean }>();
+  private readonly states = new Map<string, string>();
+  private awaySinceUtcMs: number | null = null;
+  private looks = 0;
+  private cancel: Cancel = () => undefined;
+  private stopped = false;
+  private last: Promise<unknown> = Promise.resolve();
+
+  constructor(private readonly parts: WatchParts) {}
+
+  start(): void {
+    this.parts.services.supervisor.onChange((driver, change) => this.runChanged(driver, change));
+    this.next();
+  }
+
+  stop(): void {
+    this.stopped = true;
+    this.cancel();
+  }
+
+  /** The database does not answer since then; null: it does again. */
+  noteDatabase(sinceUtcMs: number | null): void {
+    const since = this.awaySinceUtcMs;
+    this.awaySinceUtcMs = sinceUtcMs;
+    if (sinceUtcMs === null && since !== null) this.soon(() => this.tellOutage(since));
+  }
+
+  /** What the line of a rig told, and whether somebody answered for the rig just before. */
+  heard(station: RigStation, event: LinkEvent, wasArmed: boolean): void {
+    const { rigId } = station;
+    const open = this.open.get(rigId) ?? { interlock: false, supply: false };
+    const busy = wasArmed || this.parts.services.supervisor.activeOf(rigId)?.isOver() === false;
+    if (event.kind === 'interlock') open.interlock = !event.closed && (open.interlock || busy);
+    if (event.kind === 'supply') open.supply = !event.present && (open.supply || busy);
+    this.open.set(rigId, open);
+    if (event.kind === 'clock-stepped') this.soon(() => this.tellStep(station, event));
+    if (['interlock', 'supply', 'lost', 'ready', 'reset'].includes(event.kind)) this.soon(() => this.lookAt(station.labId, rigId));
+  }
+
+  /** Everything once, now; failures are logged. */
+  async look(): Promise<void> {
+    const { services } = this.parts;
+    if (this.awaySinceUtcMs !== null) return;
+    this.looks += 1;
+    const slow = this.looks % slowEvery === 1;
+    const rigs = await allRigs(services.database.db);
+    const own = rigs.filter(({ id }) => services.stations.get(id) !== null);
+    for (const rig of own) {
+      if (slow) await this.lookSlowly(rig);
+      await this.lookAt(rig.labId, rig.id);
+    }
+    if (slow) await this.lookAtDisk([...new Set(own.map(({ labId }) => labId))]);
+    await this.passTime();
+  }
+
+  private next(): void {
+    this.cancel = this.parts.services.clock.after(this.parts.paceMs ?? usualPaceMs, () => {
+      this.soon(() => this.look());
+      if (!this.stopped) this.next();
+    });
+  }
+
+  /** One after the other: two looks at once would tell the same twice. */
+  private soon(work: () => Promise<void>): void {
+    if (this.stopped) return;
+    const turn = this.last.then(work);
+    this.last = turn.catch(() => undefined);
+    this.parts.services.background(turn, 'a look for alarms');
+  }
+
+  private runChanged(driver: RunDriver, { facts, events }: RunChange): void {
+    const state = `${facts.state} ${facts.reasonCode}`;
+    if (this.states.get(driver.runId) === state) return;
+    this.states.set(driver.runId, state);
+    const { labId, rigId } = driver.parts.start;
+    const ended = events.find(({ kind }) => kind === 'failed' || kind === 'stopped');
+    const byPerson = facts.reasonCode === 'stopped-by-person';
+    this.soon(async () => {
+      if (ended !== undefined && !byPerson)
+        await this.tellOnce({ labId, rigId, code: 'ended-early', subject: '' }, facts.reason, driver.runId);
+      await this.lookAt(labId, rigId);
+    });
+    if (driver.isDone()) this.states.delete(driver.runId);
+  }
+
+  private async lookAt(labId: string, rigId: string): Promise<void> {
+    const { services } = this.parts;
+    const station = services.stations.get(rigId);
+    if (station === null || this.awaySinceUtcMs !== null) return;
+    const driver = services.supervisor.activeOf(rigId);
+    const facts = driver === null || driver.isOver() ? null : driver.facts();
+    const quarantined = services.supervisor.quarantinedOf(rigId);
+    const known = await this.knownOf(labId, rigId);
+    const found = conditionsOf({
+      utcMs: services.clock.utcMs(),
+      run:
+        facts === null
+          ? null
+          : { id: facts.runId, state: facts.state, reason: facts.reason, reasonCode: facts.reasonCode, startedUtcMs: facts.startedAtUtcMs },
+      quarantined: quarantined === null ? null : { runId: quarantined.start.runId, why: quarantined.why },
+      link: station.link.health(),
+      open: this.open.get(rigId) ?? { interlock: false, supply: false },
+      deflectionUtcMs: await this.deflectionUtcMs(labId, facts?.runId ?? null, station),
+    });
+    const lockedBy = facts === null ? services.locks.lockedBy(rigId) : null;
+    await this.settle({ labId, rigId }, { known, found: [...found, ...known.slow], suppressedWhy: lockedBy });
+  }
+
+  private async lookSlowly(rig: RigRecord): Promise<void> {
+    const { services } = this.parts;
+    const { db } = services.database;
+    const known = await this.knownOf(rig.labId, rig.id);
+    const utcMs = services.clock.utcMs();
+    const limits = await limitsOfRig(db, rig.labId, rig.id);
+    const slow = await limitConditions(db, limits, { utcMs, isMet: (code, subject) => known.met?.has(keyOf({ code, subject })) === true });
+    const driver = services.supervisor.activeOf(rig.id);
+    if (driver !== null && !driver.isOver()) {
+      const facts = driver.facts();
+      const active = services.activeRuns.find(rig.labId, facts.runId);
+      const { timeZone = 'UTC' } = active?.run.start ?? {};
+      slow.push(...(await lateCondition(db, facts, { labId: rig.labId, rigId: rig.id, timeZone })));
+      const channel = services.stations.get(rig.id)?.channel ?? null;
+      if (channel !== null) slow.push(...(await excursionCondition(db, rig, { channel, utcMs, runId: facts.runId })));
+    }
+    known.slow = slow;
+  }
+
+  private async deflectionUtcMs(labId: string, runId: string | null, station: RigStation): Promise<number | null> {
+    const { services } = this.parts;
+    if (runId === null) return null;
+    const { database } = services;
+    if (station.channel !== null) return lastSampleUtcMs(database, { labId, channelId: station.channel.id });
+    const run = services.activeRuns.find(labId, runId)?.run;
+    if (run === undefined) return null;
+    const wanted = run.start.protocol.evaluation?.channel;
+    const channels = (await channelsOfRun(database.db, run)).filter(({ role }) => role === 'deflection');
+    const channel = channels.find(({ name }) => name === wanted) ?? (channels.length === 1 ? channels[0] : undefined);
+    return channel === undefined ? null : lastSampleUtcMs(database, { labId, channelId: channel.id });
+  }
+
+  private async lookAtDisk(labIds: readonly string[]): Promise<void> {
+    const free = await this.parts.freeDisk();
+    if (free === null) return;
+    const words = `${String(Math.round(100 * free))} % of the disk of the server is free.`;
+    const found: Condition[] = free < leastFree ? [{ code: 'disk-low', subject: '', words, runId: null }] : [];
+    for (const labId of labIds) {
+      const known = await this.knownOf(labId, null);
+      await this.settle({ labId, rigId: null }, { known, found, suppressedWhy: null, only: ['disk-low'] });
+    }
+  }
+
+  /** Delays and shelves that are over. */
+  private async passTime(): Promise<void> {
+    const { services } = this.parts;
+    const utcMs = services.clock.utcMs();
+    const { db } = services.database;
+    for (const { labId, id } of await dueAlarms(db, utcMs))
+      await db.transaction((tx) => actOnAlarm(tx, { labId, alarmId: id }, { type: 'tick', utcMs }));
+  }
+
+  private async knownOf(labId: string, rigId: string | null): Promise<Known> {
+    const key = rigId ?? labId;
+    const known = this.known.get(key) ?? { met: null, slow: [] };
+    this.known.set(key, known);
+    known.met ??= new Set(
+      (await metAlarms(this.parts.services.database.db, labId, rigId)).filter(({ snapshot }) => snapshot.met).map(keyOf),
+    );
+    return known;
+  }
+
+  /** Takes in what has changed since the last look. */
+  private async settle(
+    at: { labId: string; rigId: string | null },
+    { known, found, suppressedWhy, only }: { known: Known; found: readonly Condition[]; suppressedWhy: string | null; only?: AlarmCode[] },
+  ): Promise<void> {
+    const utcMs = this.parts.services.clock.utcMs();
+    const { met } = known;
+    if (met === null) return;
+    for (const condition of found) {
+      const key = keyOf(condition);
+      if (met.has(key)) continue;
+      const { code, subject, sinceUtcMs, ...rest } = condition;
+      await this.report({ ...at, code, subject }, { ...rest, met: true, suppressedWhy, sinceUtcMs, utcMs });
+      met.add(key);
+    }
+    for (const key of [...met]) {
+      const [code = '', ...subject] = key.split(' ');
+      if (found.some((one) => keyOf(one) === key) || !isWatched(code) || (only !== undefined && !only.includes(code))) continue;
+      await this.report({ ...at, code, subject: subject.join(' ') }, { met: false, words: '', runId: null, utcMs });
+      met.delete(key);
+    }
+  }
+
+  private report(place: Place, found: Parameters<typeof reportCondition>[2]): Promise<void> {
+    return this.parts.services.database.db.transaction((tx) => reportCondition(tx, place, found));
+  }
+
+  private tellOnce(place: Place, words: string, runId: string | null = null): Promise<void> {
+    return this.report(place, { met: true, words, runId, utcMs: this.parts.services.clock.utcMs() });
+  }
+
+  private async tellStep({ labId, rigId }: RigStation, { clock, byMs }: Extract<LinkEvent, { kind: 'clock-stepped' }>): Promise<void> {
+    const whose = clock === 'host' ? 'The clock of the server' : 'The clock of the controller';
+    await this.tellOnce({ labId, rigId, code: 'clock-stepped', subject: clock }, `${whose} jumped by ${String(Math.round(byMs))} ms.`);
+  }
+
+  /** Nothing could be stored while the database was away: the outage is written down when it is over. */
+  private async tellOutage(sinceUtcMs: number): Promise<void> {
+    const { services } = this.parts;
+    const utcMs = services.clock.utcMs();
+    const words = `The database did not answer for ${String(Math.round((utcMs - sinceUtcMs) / 1000))} s.`;
+    const labIds = new Set(
+      (await allRigs(services.database.db)).filter(({ id }) => services.stations.get(id) !== null).map(({ labId }) => labId),
+    );
+    for (const labId of labIds) {
+      const place = { labId, rigId: null, code: 'database-away' as const, subject: '' };
+      await this.report(place, { met: true, words, runId: null, sinceUtcMs, utcMs });
+      await this.report(place, { met: false, words, runId: null, utcMs });
+    }
+  }
+}
+
+/** Kinds that a look can tell to be over; others end by what somebody does. */
+const watched: readonly AlarmCode[] = [
+  ...(['unexpected-motion', 'limit', 'interlock', 'supply', 'controller-reset', 'proof-failed', 'home-edge', 'excursion', 'held'] as const),
+  ...([
+    'not-taken-up',
+    'link-lost',
+    'deflection-silent',
+    'channel-level',
+    'channel-slope',
+    'channel-silent',
+    'late-finish',
+    'disk-low',
+  ] as const),
+];
+const isWatched = (code: string): code is AlarmCode => (watched as readonly string[]).includes(code);

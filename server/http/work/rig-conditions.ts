@@ -1,0 +1,69 @@
+import { alarmOfHold, type AlarmCode, type Ringing } from '@/shared/alarms/catalog';
+import type { RunState } from '@/shared/contracts/runs';
+import type { LinkHealth } from '../../interfaces/turntable-link';
+
+/** A condition that holds now. */
+export interface Condition {
+  code: AlarmCode;
+  subject: string;
+  words: string;
+  runId: string | null;
+  rings?: Ringing;
+  onDelayS?: number;
+  /** Since when it holds, where that is known better than by looking. */
+  sinceUtcMs?: number;
+}
+
+/** What is seen of a rig at one moment. */
+export interface RigNow {
+  utcMs: number;
+  run: { id: string; state: RunState; reason: string; reasonCode: string; startedUtcMs: number | null } | null;
+  /** Why an unfinished run could not be taken up; null where there is none. */
+  quarantined: { runId: string; why: string } | null;
+  link: Pick<LinkHealth, 'condition' | 'detail'>;
+  /** Opened or lost while the rig was armed or ran, and not yet made good. */
+  open: { interlock: boolean; supply: boolean };
+  /** When the deflection that the run is to be evaluated by last came; null: it never did, or nothing arrives by itself. */
+  deflectionUtcMs: number | null;
+}
+
+const silentMs = 60_000;
+const atRest: RunState[] = ['holding', 'held'];
+const atWork: RunState[] = ['starting', 'running', ...atRest];
+
+/** The alarms of a rig that its run, its line and its inputs give cause for. */
+export function conditionsOf(now: RigNow): Condition[] {
+  const { run, quarantined, link, open } = now;
+  const runId = run?.id ?? null;
+  const found: Condition[] = [];
+  const add = (code: AlarmCode, words: string) => {
+    if (!found.some((one) => one.code === code)) found.push({ code, subject: '', words, runId });
+  };
+  if (run !== null && atRest.includes(run.state)) {
+    const code = alarmOfHold(run.reasonCode);
+    if (code !== null) add(code, run.reason);
+  }
+  if (open.interlock) add('interlock', 'The interlock was opened while the rig was armed. Close it and arm the rig again on site.');
+  if (open.supply) add('supply', 'The motor supply was lost while the rig was armed; the position is lost with it.');
+  if (quarantined !== null) found.push({ code: 'not-taken-up', subject: '', words: quarantined.why, runId: quarantined.runId });
+  if (link.condition === 'lost' || link.condition === 'refused')
+    add('link-lost', link.detail === '' ? 'The controller does not answer.' : link.detail);
+  const silent = silentSince(now);
+  if (silent !== null)
+    found.push({
+      code: 'deflection-silent',
+      subject: '',
+      words: 'No deflection arrives.',
+      runId,
+      sinceUtcMs: silent,
+      onDelayS: silentMs / 1000,
+    });
+  return found;
+}
+
+/** Since when the deflection of a run is silent; null where it is not, or where none was flowing when the run began. */
+function silentSince({ run, deflectionUtcMs, utcMs }: RigNow): number | null {
+  if (run === null || !atWork.includes(run.state) || run.startedUtcMs === null || deflectionUtcMs === null) return null;
+  const flowed = deflectionUtcMs >= run.startedUtcMs - 10 * silentMs;
+  return flowed && utcMs - deflectionUtcMs > silentMs ? deflectionUtcMs : null;
+}
