@@ -1,5 +1,5 @@
 import { useQueryClient } from '@tanstack/react-query';
-import { createContext, useContext, useEffect, useMemo, useReducer, useRef, type ReactNode } from 'react';
+import { createContext, useContext, useEffect, useMemo, useReducer, useRef, useState, type ReactNode } from 'react';
 import { getMe, signOut as signOutRoute, type Me, type MembershipView } from '@/shared/contracts/people';
 import { may, type Act } from '@/shared/contracts/roles';
 import { call, onSignInRefused } from './client';
@@ -26,6 +26,8 @@ function rememberLabId(labId: string): void {
 
 interface SessionApi {
   state: SessionState;
+  /** Why the server could not say yet who is signed in; it is asked again. */
+  problem: unknown;
   membership: MembershipView | null;
   signedIn: (me: Me) => void;
   signOut: () => Promise<void>;
@@ -46,7 +48,7 @@ export function useSession(): SessionApi {
 const askAgainMs = 3000;
 
 /** Asks once who is signed in; a server that does not answer is asked again. */
-function useAsk(ask: boolean, answered: (me: Me | null) => void) {
+function useAsk(ask: boolean, answered: (me: Me | null) => void, failed: (error: unknown) => void) {
   useEffect(() => {
     if (!ask) return undefined;
     let timer: ReturnType<typeof setTimeout> | undefined;
@@ -57,7 +59,10 @@ function useAsk(ask: boolean, answered: (me: Me | null) => void) {
         (error: unknown) => {
           if (over) return;
           if (error instanceof ApiProblem && error.status === 401) answered(null);
-          else timer = setTimeout(attempt, askAgainMs);
+          else {
+            failed(error);
+            timer = setTimeout(attempt, askAgainMs);
+          }
         },
       );
     };
@@ -66,7 +71,7 @@ function useAsk(ask: boolean, answered: (me: Me | null) => void) {
       over = true;
       clearTimeout(timer);
     };
-  }, [ask, answered]);
+  }, [ask, answered, failed]);
 }
 
 /** Holds the session of this page. */
@@ -74,12 +79,14 @@ export function SessionProvider({ children }: { children: ReactNode }) {
   const queries = useQueryClient();
   const [state, dispatch] = useReducer(sessionReducer, { kind: 'unknown' });
   const answered = useMemo(() => (me: Me | null) => dispatch({ kind: 'asked', me, rememberedLabId: rememberedLabId() }), []);
-  useAsk(state.kind === 'unknown', answered);
+  const [problem, failed] = useState<unknown>(null);
+  useAsk(state.kind === 'unknown', answered, failed);
   useEffect(() => onSignInRefused(() => dispatch({ kind: 'refused' })), []);
 
   const api = useMemo<SessionApi>(
     () => ({
       state,
+      problem: state.kind === 'unknown' ? problem : null,
       membership: membershipOf(state),
       signedIn: (me) => {
         const samePerson = state.kind === 'expired' && state.me.user.id === me.user.id;
@@ -102,7 +109,7 @@ export function SessionProvider({ children }: { children: ReactNode }) {
         dispatch({ kind: 'lab-chosen', labId });
       },
     }),
-    [state, queries],
+    [state, problem, queries],
   );
   useRefreshWhenSeen(api);
   return <SessionContext.Provider value={api}>{children}</SessionContext.Provider>;

@@ -1,15 +1,23 @@
 import { createHash } from 'node:crypto';
 import { existsSync, mkdirSync, readFileSync, readdirSync, renameSync, rmSync, statSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
+import { writeOfflinePage } from './offline-page.mjs';
 import { root, state } from './paths.mjs';
 import { precompress } from './precompress.mjs';
 import { must } from './run.mjs';
 import { say, waiting } from './say.mjs';
+import { writeServiceWorker } from './service-worker.mjs';
 
 const config = ['app.json', 'babel.config.js', 'metro.config.js', 'tailwind.config.js', 'tsconfig.json', 'package-lock.json'];
-const builders = ['web-build.mjs', 'first-page.mjs', 'web-cuts.cjs', 'no-native-stack.cjs', 'precompress.mjs'].map((name) =>
-  join('scripts', 'lib', name),
-);
+const builders = [
+  'web-build.mjs',
+  'first-page.mjs',
+  'offline-page.mjs',
+  'service-worker.mjs',
+  'web-cuts.cjs',
+  'no-native-stack.cjs',
+  'precompress.mjs',
+].map((name) => join('scripts', 'lib', name));
 const sources = ['app', 'components', 'shared', 'assets', 'public', 'global.css', ...config, ...builders];
 const stamp = join(state, 'web-build');
 
@@ -45,6 +53,8 @@ export async function ensureWebBuild() {
   // Loaded only now: a bare clone has no packages when this file is read.
   const { writeFirstPage } = await import('./first-page.mjs');
   await writeFirstPage(fresh);
+  await writeOfflinePage(fresh);
+  await writeServiceWorker(fresh);
   await precompress(fresh);
   rmSync(join(root, 'dist'), { recursive: true, force: true });
   renameSync(fresh, join(root, 'dist'));

@@ -2,10 +2,14 @@ import { existsSync, readdirSync, readFileSync } from 'node:fs';
 import { extname, join, sep } from 'node:path';
 import express, { Router, type Request, type RequestHandler, type Response } from 'express';
 
-/** The pages of the web application: the one for every address, and the sign-in page as it stands before the program has come. */
+/**
+ * The pages of the web application: the one for every address, the sign-in page as it stands before the program has come, and the page that a
+ * browser keeps for when the server does not answer (empty where nothing is built).
+ */
 export interface WebPages {
   index: string;
   signIn: string;
+  offline: string;
 }
 
 /** The built pages, or a plain page that says what is missing. */
@@ -15,7 +19,7 @@ export function readWebPages(webDir: string | null): WebPages {
     return file !== null && existsSync(file) ? readFileSync(file, 'utf8') : null;
   };
   const index = read('index.html') ?? notBuilt;
-  return { index, signIn: read('sign-in.html') ?? index };
+  return { index, signIn: read('sign-in.html') ?? index, offline: read('offline.html') ?? '' };
 }
 
 const notBuilt =

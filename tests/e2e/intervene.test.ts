@@ -28,7 +28,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
   const chapter = chapters(() => hand);
   beforeAll(async () => {
     network = await Network.to(lab().address);
-    hand = new Hand(await lab().open(size, 'operator', network.address));
+    hand = new Hand(await lab().open(size, 'operator', { address: network.address }));
   });
   afterAll(async () => {
     expect(hand.browser.errors).toEqual([]);

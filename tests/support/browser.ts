@@ -33,8 +33,8 @@ export interface Browser {
   close(): Promise<void>;
 }
 
-/** Debian's Chromium with a fresh profile at one of the two sizes. */
-export async function openBrowser(baseURL: string, size: Size): Promise<Browser> {
+/** Debian's Chromium with a fresh profile at one of the two sizes; `installs`: it may keep the built program, which costs each profile a fetch of it all. */
+export async function openBrowser(baseURL: string, size: Size, installs = false): Promise<Browser> {
   const profile = mkdtempSync(join(tmpdir(), 'evenfall-browser-'));
   const context = await chromium.launchPersistentContext(profile, {
     executablePath: '/usr/bin/chromium',
@@ -43,6 +43,7 @@ export async function openBrowser(baseURL: string, size: Size): Promise<Browser>
     baseURL,
     viewport: sizes[size],
     acceptDownloads: true,
+    serviceWorkers: installs ? 'allow' : 'block',
     timezoneId: 'Europe/Zurich',
     locale: 'en-GB',
     colorScheme: 'dark',

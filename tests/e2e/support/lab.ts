@@ -74,9 +74,9 @@ export class Lab {
     return () => this.letTimeFlow();
   }
 
-  /** A browser, signed in where a role is given; `address` is where a network of its own begins. */
-  async open(size: Size, role?: Role, address = this.address): Promise<Browser> {
-    const browser = await openBrowser(address, size);
+  /** A browser, signed in where a role is given; `address` is where a network of its own begins, `installs`: it keeps the built program. */
+  async open(size: Size, role?: Role, { address = this.address, installs = false } = {}): Promise<Browser> {
+    const browser = await openBrowser(address, size, installs);
     this.browsers.add(browser);
     if (role !== undefined) await this.enter(browser, role);
     return browser;

@@ -15,7 +15,7 @@ mkdirSync(join(folder, 'assets'));
 writeFileSync(join(folder, hashed), script);
 writeFileSync(join(folder, `${hashed}.br`), brotliCompressSync(script));
 writeFileSync(join(folder, 'theme.js'), 'document.title;');
-const pages = { index: '<!doctype html><title>Evenfall</title>', signIn: '<!doctype html><title>Sign in</title>' };
+const pages = { index: '<!doctype html><title>Evenfall</title>', signIn: '<!doctype html><title>Sign in</title>', offline: '' };
 const hasSession = (req: Request) => req.headers.cookie === 'ef=somebody';
 const app = express().use(compression(), webFiles(folder, { pages, hasSession }));
 
