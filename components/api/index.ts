@@ -1,7 +1,8 @@
+export { callOnce } from './call-once';
 export { addressOf, call, newIdempotencyKey, type CallInput, type CallResult } from './client';
 export { useConnection } from './connection';
 export { deviceNowMs, serverNowIso, serverNowMs } from './device-clock';
-export { ApiProblem, ApiUnreachable, fieldErrors, isProblem, wordsOf } from './problem';
+export { ApiProblem, ApiUnreachable, fieldErrors, isProblem, Unanswered, wordsOf } from './problem';
 export { ApiProvider } from './provider';
-export { labKey, useLabCall, useLabMutation, useLabQuery } from './queries';
+export { labKey, useLabCall, useLabMutation, useLabOnce, useLabQuery } from './queries';
 export { useLab, useMay, useSession } from './session';

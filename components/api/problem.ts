@@ -25,6 +25,16 @@ export class ApiUnreachable extends Error {
   }
 }
 
+/** An act that counts for 5 s and is sent once had no answer: the request may have been lost, or its answer. */
+export class Unanswered extends Error {
+  constructor() {
+    super(
+      'No answer came. It counts for 5 s and was not sent again; whether the server got it in time shows in the state of the run. Look there before you try once more.',
+    );
+    this.name = 'Unanswered';
+  }
+}
+
 export interface ProblemWords {
   detail: string;
   errors: readonly { path: string; message: string }[];
@@ -33,6 +43,7 @@ export interface ProblemWords {
 /** Any failure of a request in words for the screen. */
 export function wordsOf(error: unknown): ProblemWords {
   if (error instanceof ApiProblem) return { detail: error.detail, errors: error.errors };
+  if (error instanceof Unanswered) return { detail: error.message, errors: [] };
   if (error instanceof ApiUnreachable)
     return { detail: 'The server cannot be reached. Nothing you typed is lost; try again when the connection is back.', errors: [] };
   return { detail: 'Something went wrong in this page. Reload it; if it happens again, tell the keeper of the lab.', errors: [] };

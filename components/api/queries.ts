@@ -1,5 +1,6 @@
 import { useMutation, useQuery, type QueryKey, type UseMutationResult, type UseQueryResult } from '@tanstack/react-query';
 import type { ParamsOf, QueryOf, RouteContract } from '@/shared/contracts/route';
+import { callOnce } from './call-once';
 import { call, type CallInput, type CallResult } from './client';
 import { useLab } from './session';
 
@@ -40,6 +41,16 @@ type LabCallInput<R extends RouteContract> = Omit<CallInput<R>, 'params'> & { pa
 export function useLabCall<R extends RouteContract>(route: R): (input?: LabCallInput<R>) => Promise<CallResult<R>> {
   const { labId } = useLab();
   return (input = {}) => call(route, { ...input, params: withLab<R>(labId, input.params) } as CallInput<R>);
+}
+
+/** An act of the present lab that lets masses move: sent once, and waited for as long as it counts. */
+export function useLabOnce<R extends RouteContract>(
+  route: R,
+  after: (result: CallResult<R>) => void,
+): UseMutationResult<CallResult<R>, Error, LabCallInput<R>> {
+  const { labId } = useLab();
+  const mutationFn = (input: LabCallInput<R>) => callOnce(route, { ...input, params: withLab<R>(labId, input.params) } as CallInput<R>);
+  return useMutation({ mutationFn, onSuccess: after });
 }
 
 /** A change through a route of the present lab. Never tried again by itself. */

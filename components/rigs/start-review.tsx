@@ -1,6 +1,6 @@
 import { useRouter, type Href } from 'expo-router';
 import { View } from 'react-native';
-import { serverNowIso, useLab, useLabCall, useLabMutation, useSession, wordsOf } from '@/components/api';
+import { serverNowIso, useLab, useLabCall, useLabOnce, useSession, wordsOf } from '@/components/api';
 import { Body, Label, Num, Panel, PressAndKeep, ProblemNotice, Section } from '@/components/ui';
 import { reviewStart } from '@/shared/contracts/reviews';
 import type { RigView } from '@/shared/contracts/rigs';
@@ -92,7 +92,7 @@ interface StartActProps {
 function StartAct({ rig, choice, mayStart, stale }: StartActProps) {
   const router = useRouter();
   const refresh = useRefreshRigs();
-  const start = useLabMutation(startRun, ({ data }) => {
+  const start = useLabOnce(startRun, ({ data }) => {
     refresh();
     router.replace(`/runs/${data.id}` as Href);
   });

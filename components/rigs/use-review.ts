@@ -13,8 +13,13 @@ interface Held<T> {
  * Keeps a review that counts while `on`: asked for when what is reviewed changes, and again before it grows old.
  * @param of names what is reviewed; another name is another review
  */
-export function useReview<T>(of: string, ask: () => Promise<T>, on: boolean): { review: T | null; renew: () => void } {
+export function useReview<T>(
+  of: string,
+  ask: () => Promise<T>,
+  on: boolean,
+): { review: T | null; /** Why the last one could not be had; null where it could. */ problem: unknown; renew: () => void } {
   const [held, setHeld] = useState<Held<T> | null>(null);
+  const [problem, setProblem] = useState<unknown>(null);
   const [turn, setTurn] = useState(0);
   // Another function at each drawing; what it asks for is named by `of`.
   const newest = useRef(ask);
@@ -32,11 +37,13 @@ export function useReview<T>(of: string, ask: () => Promise<T>, on: boolean): { 
       (review) => {
         if (over) return;
         setHeld({ of, review });
+        setProblem(null);
         again(renewMs);
       },
-      () => {
+      (error: unknown) => {
         if (over) return;
         setHeld(null);
+        setProblem(error);
         again(retryMs);
       },
     );
@@ -47,6 +54,7 @@ export function useReview<T>(of: string, ask: () => Promise<T>, on: boolean): { 
   }, [of, on, turn]);
   return {
     review: on && held?.of === of ? held.review : null,
+    problem,
     renew: () => {
       setHeld(null);
       setTurn((before) => before + 1);

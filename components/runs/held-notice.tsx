@@ -4,6 +4,7 @@ import { useConnection, useMay } from '@/components/api';
 import { Body, Button, Label, Panel } from '@/components/ui';
 import type { RunView } from '@/shared/contracts/runs';
 import { ResumeSheet } from './resume-sheet';
+import { SkipStep } from './skip-sheet';
 
 interface HeldNoticeProps {
   view: RunView;
@@ -29,6 +30,7 @@ export function HeldNotice({ view, timeZone, serverNowMs }: HeldNoticeProps) {
       <Body>{view.reason === '' ? 'The run is held. Nothing moves.' : view.reason}</Body>
       <View className="flex-row flex-wrap items-center gap-3">
         <Button kind="primary" icon="start" label="Resume" disabled={why !== ''} onPress={() => setReviewing(true)} testID="resume" />
+        <SkipStep view={view} timeZone={timeZone} serverNowMs={serverNowMs} />
         {why === '' ? null : (
           <Label tone="text" className="min-w-0 shrink basis-[200px] grow" testID="resume-why">
             {why}

@@ -55,7 +55,7 @@ const words: Record<SafeAct, string> = { hold: 'Hold', 'hold-after-dwell': 'Hold
 /** An act that the server knows of, newest. */
 type Known = NonNullable<RunView['intervention']>;
 
-const isSafe = (kind: Known['kind']): kind is SafeAct => kind !== 'resume';
+const isSafe = (kind: Known['kind']): kind is SafeAct => kind === 'hold' || kind === 'hold-after-dwell' || kind === 'stop';
 
 /**
  * The three stages from what this page did and what the server says. `Stopped` and `held` are said only when the

@@ -1,10 +1,11 @@
 import { useLocalSearchParams, type Href } from 'expo-router';
 import { View } from 'react-native';
-import { useLab, wordsOf } from '@/components/api';
-import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, useWide } from '@/components/ui';
+import { isProblem, useLab, wordsOf } from '@/components/api';
+import { Chip, Label, Loading, Panel, ProblemNotice, Screen, useWide } from '@/components/ui';
 import type { RunView } from '@/shared/contracts/runs';
 import { PositionFacts } from '@/components/rigs/position-facts';
 import { LockedNotice } from '@/components/rigs/lock-panel';
+import { AfterDwell } from './after-dwell';
 import { ControlBar } from './control-bar';
 import { HeldNotice } from './held-notice';
 import { linkAge } from './link-age';
@@ -31,7 +32,7 @@ export function RunScreen() {
   const { view } = live.state;
   if (view === null) {
     return (
-      <Screen title="Run" back={back}>
+      <Screen title="Run" back={back} footer={canAct(live.error) ? <BlindControls runId={runId} /> : undefined}>
         {live.error === null ? (
           <Loading label="Loading the run" />
         ) : (
@@ -46,6 +47,16 @@ export function RunScreen() {
   }
   if (view.state === 'rehearsing') return <RehearsalAtWork view={view} refresh={live.refresh} />;
   return isOver(view.state) ? <ResultScreen view={view} /> : <LiveScreen view={view} live={live} />;
+}
+
+/** Whether a run may be there although it cannot be shown. */
+const canAct = (error: unknown) => error !== null && !isProblem(error, 'not-found') && !isProblem(error, 'not-allowed');
+
+/** Hold and stop of a run of which nothing is known here: neither needs what the page could not load. */
+function BlindControls({ runId }: { runId: string }) {
+  const { labId, timeZone } = useLab();
+  const { local, tap } = useIntervention({ labId, runId });
+  return <ControlBar view={{ state: 'running', intervention: null }} local={local} onTap={tap} timeZone={timeZone} />;
 }
 
 /** The live part, with its acts always at the bottom. */
@@ -82,7 +93,7 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
       <SlipNotice view={view} timeZone={timeZone} />
       <HeldNotice view={view} timeZone={timeZone} serverNowMs={serverNowMs} />
       <LiveStrip strip={strip} timeZone={timeZone} serverNowMs={serverNowMs} title={`${view.rigName}, ${view.protocolName}`} lost={lost} />
-      <AfterDwell view={view} onTap={() => tap('hold-after-dwell')} />
+      <AfterDwell view={view} timeZone={timeZone} serverNowMs={serverNowMs} onTap={() => tap('hold-after-dwell')} />
       {wide ? null : plan}
       {wide ? null : log}
       <Facts view={view} />
@@ -98,19 +109,6 @@ function SlipNotice({ view, timeZone }: { view: RunView; timeZone: string }) {
       <PositionFacts position={view.position} timeZone={timeZone} />
     </Panel>
   );
-}
-
-/** The gentle way to hold: at the end of the dwell, so that its data count in full. */
-function AfterDwell({ view, onTap }: { view: RunView; onTap: () => void }) {
-  if (view.state !== 'running' || view.current === null) return null;
-  if (view.holdAfterDwell) {
-    return (
-      <Panel edge="lamp">
-        <Body>Will hold when this dwell has ended. Nothing is cut short.</Body>
-      </Panel>
-    );
-  }
-  return <Button label="Hold after this dwell" icon="dwell" onPress={onTap} testID="hold-after-dwell" />;
 }
 
 function Facts({ view }: { view: RunView }) {

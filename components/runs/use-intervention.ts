@@ -1,6 +1,6 @@
 import { useReducer, useRef } from 'react';
-import { ApiProblem, call, deviceNowMs, newIdempotencyKey, serverNowIso, serverNowMs } from '@/components/api';
-import { holdAfterDwell, holdRun, resumeRun, stopRun } from '@/shared/contracts/runs';
+import { ApiProblem, call, newIdempotencyKey, serverNowIso, serverNowMs } from '@/components/api';
+import { holdAfterDwell, holdRun, stopRun } from '@/shared/contracts/runs';
 import { interventionReducer, type LocalIntervention, type SafeAct } from './intervention';
 import { sendUntilAnswered, type Attempt, type Sending } from './send-until-answered';
 
@@ -77,39 +77,3 @@ export function useSafeActs(post: SafePost): SafeActs {
 /** The safe acts of a run. */
 export const useIntervention = ({ labId, runId }: RunAddress): SafeActs =>
   useSafeActs((act, input) => call(routes[act], { params: { labId, runId }, ...input }));
-
-/** A resume counts for 5 s after the tap: whoever tapped must still be looking. */
-const resumeExpiresMs = 5000;
-
-/**
- * Resumes once. It is never sent again by itself and never waits for a connection.
- * @throws ApiProblem when refused; ApiUnreachable or an abort when there was no answer in 5 s.
- */
-export async function resumeOnce({ labId, runId }: RunAddress, reviewToken: string): Promise<{ serverAt: string }> {
-  const abort = new AbortController();
-  const startedMs = deviceNowMs();
-  const timer = setTimeout(() => abort.abort(), resumeExpiresMs);
-  try {
-    const { data } = await call(resumeRun, {
-      params: { labId, runId },
-      body: { tappedAt: serverNowIso(), reviewToken },
-      signal: abort.signal,
-    });
-    return data;
-  } catch (error) {
-    if (deviceNowMs() - startedMs >= resumeExpiresMs) throw new ResumeExpired();
-    throw error;
-  } finally {
-    clearTimeout(timer);
-  }
-}
-
-/** No answer within the 5 s for which a resume counts. */
-export class ResumeExpired extends Error {
-  constructor() {
-    super(
-      'There was no answer in 5 s, so this resume has expired and was not sent again. Look at the state above before you try once more.',
-    );
-    this.name = 'ResumeExpired';
-  }
-}

@@ -1,5 +1,5 @@
 import { useCallback, useEffect, useReducer, useRef } from 'react';
-import { addressOf, call, deviceNowMs, useLab } from '@/components/api';
+import { addressOf, call, deviceNowMs, isProblem, useLab } from '@/components/api';
 import { reportReached } from '@/components/api/connection';
 import { getRun, listSteps, liveMessageSchemas, liveRun, type LiveMessages } from '@/shared/contracts/runs';
 import { isOver } from './run-words';
@@ -80,8 +80,16 @@ export function useLiveRun(runId: string): LiveRun {
   const refresh = useCallback(async () => {
     try {
       const params = { labId, runId };
-      const [view, steps] = await Promise.all([call(getRun, { params }), call(listSteps, { params })]);
-      dispatch({ kind: 'loaded', view: view.data, rows: steps.data.items });
+      // Without its database the server knows the run it drives, but not its log.
+      const log = call(listSteps, { params }).then(
+        ({ data }) => data.items,
+        (problem: unknown) => {
+          if (!isProblem(problem, 'database-away')) throw problem;
+          return [];
+        },
+      );
+      const [view, rows] = await Promise.all([call(getRun, { params }), log]);
+      dispatch({ kind: 'loaded', view: view.data, rows });
       setError(null);
     } catch (problem) {
       setError(problem);

@@ -34,6 +34,8 @@ export interface BuildOverrides {
   exitDelayMs?: number;
   /** Where runs write while the database is away; default: files of the state folder. */
   journals?: RunJournals;
+  /** Free disk, bytes. */
+  freeBytes?: () => Promise<number | null>;
   /** Whether chores run at their UTC times; they follow the machine's clock, whatever `clock` is. */
   ticks?: boolean;
 }

@@ -6,6 +6,7 @@ import type { Arming } from '../engine/arming';
 import type { RunStart } from '@/shared/archive/run-records';
 import { endOfArm, knownAfter } from '../engine/end-of-arm';
 import { GuidedMoves } from '../engine/guided-moves';
+import { MotorSoak } from '../engine/motor-soak';
 import type { NoticeTopic } from '../engine/run-context';
 import { RigSupervisor, type SupervisorParts } from '../engine/rig-supervisor';
 import { DATABASE_GRACE_MS } from '../engine/run-saver';
@@ -51,6 +52,7 @@ export interface RigSide {
   supervisor: RigSupervisor;
   guided: GuidedMoves;
   apparatus: RigApparatus;
+  soak: MotorSoak;
 }
 
 /** All that has to do with the rigs: who may move them, their lines, and the engine that drives runs. */
@@ -77,7 +79,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
       onDatabase(sinceUtcMs);
     },
   });
-  const apparatus = new RigApparatus(parts, log);
+  const [apparatus, soak] = [new RigApparatus(parts, log), new MotorSoak()];
   const stations = new ServerRigStations({
     ...{ database, samples, clock, log },
     paceMs: overrides.paceMs ?? 0,
@@ -105,7 +107,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     endArm: (rig, why, by) => arms.end(rig, why, by),
     onChange: onLine,
   });
-  const heed = heedLinks({ arms, arming, guided }, wiring);
+  const heed = heedLinks({ arms, arming, guided, soak }, wiring, () => clock.utcMs());
 
   /** Two drivers on one rig would be worse than none. */
   function letGo({ rigId }: RigKey): void {
@@ -114,11 +116,15 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     background.add(stations.closeOne(rigId), 'closing a line');
   }
 
-  return { arms, arming, locks, leases, stations, supervisor, guided, apparatus };
+  return { arms, arming, locks, leases, stations, supervisor, guided, apparatus, soak };
 }
 
 /** What each line tells: whatever lets people or surprises into the room, or loses the position, ends the arm, run or no run. */
-function heedLinks({ arms, arming, guided }: Pick<RigSide, 'arms' | 'arming' | 'guided'>, { log, onLinkEvent }: RigSideWiring) {
+function heedLinks(
+  { arms, arming, guided, soak }: Pick<RigSide, 'arms' | 'arming' | 'guided' | 'soak'>,
+  { log, onLinkEvent }: RigSideWiring,
+  nowUtcMs: () => number,
+) {
   const known = new Map<string, boolean>();
   return (station: RigStation, event: LinkEvent): void => {
     const wasKnown = known.get(station.rigId) ?? false;
@@ -127,6 +133,7 @@ function heedLinks({ arms, arming, guided }: Pick<RigSide, 'arms' | 'arming' | '
     known.set(station.rigId, knownAfter(event, wasKnown));
     if (why !== null) arms.end(station, why, engineItself);
     if (event.kind === 'clock-stepped') log.warn({ rigId: station.rigId, clock: event.clock, byMs: event.byMs }, 'a clock stepped');
+    soak.note(station.rigId, station.link.controller(), nowUtcMs());
     arming.heard(station.rigId, event);
     guided.heard(station.rigId, event);
     onLinkEvent(station, event, wasArmed);

@@ -1,4 +1,5 @@
 import { randomBytes, randomUUID } from 'node:crypto';
+import { statfs } from 'node:fs/promises';
 import { pino, type Logger } from 'pino';
 import { createSessions } from '../auth/sessions';
 import { sha256Hex } from '../evaluation/sha256';
@@ -36,7 +37,7 @@ import { RigTaking } from './take-rigs';
 import { createWorkerTasks } from './worker-tasks';
 
 /** What begins and ends with the server and no route needs. */
-export interface Inside extends Omit<RigSide, 'supervisor' | 'guided'> {
+export interface Inside extends Omit<RigSide, 'supervisor' | 'guided' | 'soak'> {
   crew: JobCrew;
   background: Background;
   watch: AlarmWatch;
@@ -60,7 +61,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   const nowUtcMs = () => clock.utcMs();
   const samples = createSampleStore(database);
   const sessions = createSessions({ db: database.db, clock, newToken, sha256: sha256Hex });
-  const { arms, arming, locks, leases, stations, supervisor, guided, apparatus } = buildRigSide(parts, {
+  const { arms, arming, locks, leases, stations, supervisor, guided, apparatus, soak } = buildRigSide(parts, {
     ...{ log, background, samples },
     onLine: (rigId) => lines.changed(rigId),
     onTaken: (rig) => background.add(taking.takenOver(rig), 'taking a rig over'),
@@ -74,7 +75,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   const workers = overrides.tasks === undefined ? createWorkerTasks() : null;
   const takenUp = openPromise();
   const services: Services = {
-    ...{ clock, log, database, sessions, access, samples, stations, arms, arming, locks, supervisor, guided, live, lines, newToken },
+    ...{ clock, log, database, sessions, access, samples, stations, arms, arming, locks, supervisor, guided, soak, live, lines, newToken },
     config: { ...config, limits: { ...config.limits } },
     ...{ newId: randomUUID, sha256: sha256Hex },
     reviews: new Reviews({ clock, newToken }),
@@ -86,6 +87,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     background: (work, what) => background.add(work, what),
     takenUp: takenUp.promise,
     databaseAwaySinceUtcMs: () => awaySinceUtcMs,
+    freeBytes: overrides.freeBytes ?? (() => freeBytesAt(config.stateDir)),
     breathe: () => new Promise((resolve) => setImmediate(resolve)),
     pokeJobs: () => crew.poke(),
   };
@@ -131,6 +133,12 @@ function buildTelling({ database: { db }, clock, config, overrides = {} }: Build
   const push = overrides.push ?? createWebPush({ db, outgoing, subject, nowUtcMs });
   return { mail, push, outgoing, tell: { db, clock, mail, push, origin } };
 }
+
+const freeBytesAt = (folder: string): Promise<number | null> =>
+  statfs(folder).then(
+    ({ bavail, bsize }) => bavail * bsize,
+    () => null,
+  );
 
 /** Workers of this process: mails do not wait behind a rehearsal. */
 function buildCrew({ overrides = {} }: BuildParts, services: Services): JobCrew {

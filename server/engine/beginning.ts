@@ -2,6 +2,7 @@ import type { RunStart } from '@/shared/archive/run-records';
 import { beginCursor } from '@/shared/protocol/cursor';
 import type { Draft } from './draft';
 import type { ControllerState } from '../interfaces/turntable-link';
+import { noPair } from './pairs';
 import type { KnownController, RunContext } from './run-context';
 import { nothingKnown } from './position';
 import { chooseNext } from './steps';
@@ -30,6 +31,7 @@ export function newContext(start: RunStart, nowUtcMs: number): RunContext {
     moment: { utcMs: nowUtcMs, uS: 0, angleDeg: start.rig.motion?.homeDeg ?? 0 },
     onCadence: false,
     swingStartUtcMs: null,
+    pair: noPair,
     holdAfterStep: null,
     intervention: null,
     interruption: null,

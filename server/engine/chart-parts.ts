@@ -10,10 +10,12 @@ import {
   noteDatabaseBack,
   noteGrave,
   noteInterruption,
+  noteRefusedWithdrawal,
   requestHold,
   requestHoldAfterDwell,
   requestStop,
   returnRefusal,
+  withdrawHold,
 } from './halting';
 import {
   hasRestarted,
@@ -34,6 +36,7 @@ import {
 } from './observations';
 import { hasSlipped, noteEdge } from './position';
 import { type RunContext, type RunEvent } from './run-context';
+import { noteRefusedSkip, skip, skipRefusal } from './skipping';
 import { finishMotion, noteBegan, noteEnded, takeAhead } from './motions';
 import { chooseNext, standingEndUtcMs } from './steps';
 
@@ -198,7 +201,12 @@ export const underWay = {
   hold: { target: 'holding' as const, actions: act(requestHold) },
   stop: { target: 'stopping' as const, actions: act(requestStop) },
   'hold-after-dwell': { actions: act(requestHoldAfterDwell) },
+  'withdraw-hold': [
+    { guard: ({ context }: Told) => context.run.holdAfterStep !== null, actions: act(withdrawHold) },
+    { actions: act(noteRefusedWithdrawal) },
+  ],
   resume: { actions: act((draft) => draft.log('resume-refused', { why: 'the run is not held' })) },
+  skip: { actions: act(noteRefusedSkip) },
   'link.lost': interruptedBy(noteLost),
   'arm-ended': { target: 'holding' as const, actions: act(noteArmEnded, beginHold) },
   'link.ready': [...returns, { actions: act(noteReady) }],
@@ -209,6 +217,18 @@ export const underWay = {
   'server-restarted': interruptedBy(),
   'database-away': interruptedBy(),
   'database-back': { actions: act(noteDatabaseBack) },
+};
+
+/** The rest of a step that stands, left out by a person. */
+export const skips = [
+  { guard: when((draft) => skipRefusal(draft) === null), target: 'choosing' as const, actions: act(skip) },
+  { actions: act(noteRefusedSkip) },
+];
+
+/** Asked for too late: nothing waits for the end of a step any more, and nothing is under way. */
+export const refusedAtRest = {
+  'withdraw-hold': { actions: act(noteRefusedWithdrawal) },
+  skip: { actions: act(noteRefusedSkip) },
 };
 
 /** At rest already: what is written down of the database decides nothing but whether a resume is possible. */

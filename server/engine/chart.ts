@@ -46,7 +46,9 @@ import {
   motionEnds,
   pick,
   refusals,
+  refusedAtRest,
   returns,
+  skips,
   strangeMotion,
   underWay,
   when,
@@ -128,6 +130,7 @@ const machine = chart.createMachine({
     standing: {
       on: {
         ...underWay,
+        skip: skips,
         'link.motion-began': [
           { guard: (told) => isAhead(told) && !isCancelled(told), target: 'moving', actions: act(takeAhead, expectEnd) },
           { guard: isAhead, target: 'holding', actions: act(takeAhead, beginHold) },
@@ -174,6 +177,7 @@ const machine = chart.createMachine({
         ...comingToRest,
         hold: { actions: act(requestHold) },
         stop: { target: 'stopping', actions: act(requestStop) },
+        ...refusedAtRest,
         resume: { actions: act((draft) => draft.log('resume-refused', { why: 'the run is still coming to rest' })) },
         'link.standstill': { target: 'held', actions: act(noteStandstill) },
         'link.reset': { target: 'held', actions: act(noteReset) },
@@ -190,6 +194,8 @@ const machine = chart.createMachine({
           { guard: when((draft) => resumeRefusal(draft) === null), target: 'choosing', actions: act(resume) },
           { actions: act(noteRefusedResume) },
         ],
+        ...refusedAtRest,
+        skip: skips,
         stop: { target: 'stopping', actions: act(requestStop) },
         'link.motion-began': { actions: act(noteStrangeMotion, (draft) => void draft.command((id) => ({ kind: 'hold', id }))) },
         ...pick(comingToRest, 'link.lost', 'link.refused-controller', 'link.interlock', 'link.supply', 'database-away', 'database-back'),
@@ -201,6 +207,7 @@ const machine = chart.createMachine({
     stopping: {
       on: {
         ...comingToRest,
+        ...refusedAtRest,
         stop: { actions: act(requestStop) },
         'link.standstill': { target: 'stopped', actions: act(noteStandstill) },
         'link.reset': { target: 'stopped', actions: act(noteReset) },

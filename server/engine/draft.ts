@@ -1,6 +1,7 @@
 import type { RunStart, StepOutcome, StepRow } from '@/shared/archive/run-records';
 import type { Instant } from '../interfaces/clock';
 import type { LinkCommand } from '../interfaces/turntable-link';
+import { noteDwellDone } from './pairs';
 import { noteRowClosed } from './position';
 import type {
   ActiveStep,
@@ -131,7 +132,10 @@ export class Draft {
     if (step === null || step.row.outcome !== null) return;
     Object.assign(step.row, { endUtcMs: at.utcMs, uEndS: at.uS, angleEndDeg: angleDeg, outcome });
     if (step.row.kind === 'dwell') step.row.good = true;
-    if (step.row.kind === 'dwell' && outcome === 'done') this.context.dwellsDone += 1;
+    if (step.row.kind === 'dwell' && outcome === 'done') {
+      this.context.dwellsDone += 1;
+      noteDwellDone(this, step.row);
+    }
     step.broken = outcome === 'cut short';
     noteRowClosed(this, step.row, step.motion !== null);
     this.saveRow(step.row);

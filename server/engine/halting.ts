@@ -79,6 +79,21 @@ export function requestHoldAfterDwell(draft: Draft): void {
   context.deadlineUtcMs = standingEndUtcMs(context.step);
 }
 
+/** The run goes on past the end of the step after all; what is under way is not touched. */
+export function withdrawHold(draft: Draft): void {
+  const { by } = draft.told('withdraw-hold');
+  const { context } = draft;
+  draft.log('hold-after-dwell-withdrawn', { by, askedBy: context.holdAfterStep });
+  context.holdAfterStep = null;
+  context.intervention = { kind: 'hold-withdrawn', by, serverAtUtcMs: draft.nowUtcMs, confirmedAtUtcMs: draft.nowUtcMs, commandId: null };
+}
+
+export const noteRefusedWithdrawal = (draft: Draft): void =>
+  draft.log('withdraw-hold-refused', {
+    by: draft.told('withdraw-hold').by,
+    why: 'No hold is waiting for the end of a step any more. Look at the run again.',
+  });
+
 /** Takes down what interrupted the run, and why it is held or stopped if the protocol does not let it resume. */
 export function noteInterruption(draft: Draft): void {
   const { event, context } = draft;
@@ -143,7 +158,7 @@ export function returnRefusal(draft: Draft): string | null {
 type ArmGiven = { name: string; untilUtcMs: number } | 'simulated' | null;
 
 /** What stands between a run at rest and its next motion, in a sentence; null where nothing does. */
-function motionRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string | null {
+export function motionRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string | null {
   const { context } = draft;
   const known = context.controller;
   if (context.databaseAwaySinceUtcMs !== null) return 'The database is away; wait until it answers.';

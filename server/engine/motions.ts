@@ -112,7 +112,8 @@ export function askAgain(draft: Draft): void {
 
 function confirmResume(draft: Draft): void {
   const { intervention } = draft.context;
-  if (intervention?.kind === 'resume' && intervention.confirmedAtUtcMs === null) intervention.confirmedAtUtcMs = draft.stamp.utcMs;
+  const moves = intervention?.kind === 'resume' || intervention?.kind === 'skip';
+  if (moves && intervention.confirmedAtUtcMs === null) intervention.confirmedAtUtcMs = draft.stamp.utcMs;
 }
 
 /** The motion is over, as planned or not: the row gets the controller's stamp and the achieved angle, and stays open. */

@@ -88,6 +88,8 @@ function noteSlip(draft: Draft, { steps, direction, found }: FoundSlip): void {
   for (const row of doubtful) {
     Object.assign(row, { angleSource: 'counted', uAngleDeg: doubtfulU(rig, row.uAngleDeg, steps) });
     draft.saveRow(row);
+    const { pair } = draft.context;
+    if (pair.mate?.seq === row.seq) pair.mate = structuredClone(row);
   }
   if (step?.motion != null && step.row.kind !== 'home') saveFacts(draft, step.row);
   draft.log('table-slipped', {

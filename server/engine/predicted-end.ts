@@ -1,12 +1,12 @@
 import type { RunStart } from '@/shared/archive/run-records';
-import { advanceCursor } from '@/shared/protocol/cursor';
+import { advanceCursor, type PlannedItem } from '@/shared/protocol/cursor';
 import { stateAfterIfPossible } from '@/shared/protocol/step-effect';
 import type { RunContext } from './run-context';
 
 export interface PredictionInput {
   nowUtcMs: number;
   /** Told of each step to come and when it would begin. */
-  eachStep?: (path: string, startUtcMs: number) => void;
+  eachStep?: (item: PlannedItem, startUtcMs: number) => void;
 }
 
 /** When the run would finish if it went on from here without another hitch, UTC ms. */
@@ -17,7 +17,7 @@ export function predictEndUtcMs(start: RunStart, context: RunContext, { nowUtcMs
     const next = advanceIfPossible(start, cursor, state);
     if (next === null || next.item === null) return state.utcMs;
     cursor = next.cursor;
-    eachStep?.(next.item.path, state.utcMs);
+    eachStep?.(next.item, state.utcMs);
     state = stateAfterIfPossible(next.item.step, start, state);
   }
 }

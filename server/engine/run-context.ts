@@ -3,6 +3,7 @@ import type { StepRow } from '@/shared/archive/run-records';
 import type { PositionProof } from '@/shared/rig/position-proof';
 import type { ControllerState, LinkCommand, LinkEvent } from '../interfaces/turntable-link';
 import type { Instant } from '../interfaces/clock';
+import type { OpenPair } from './pairs';
 
 /**
  * What a run remembers between two events, what it may be told and what it asks for. All of it is plain data: the
@@ -13,7 +14,7 @@ import type { Instant } from '../interfaces/clock';
  * Raised whenever the shape or meaning of the stored context changes; `stored-snapshot.ts` brings older ones up to it, and versions that
  * it does not know are quarantined.
  */
-export const CHART_VERSION = 3;
+export const CHART_VERSION = 4;
 
 export type ChartState =
   | 'starting'
@@ -80,7 +81,7 @@ export interface Interruption {
   sinceUtcMs: number;
 }
 
-export type InterventionKind = 'hold' | 'hold-after-dwell' | 'resume' | 'stop';
+export type InterventionKind = 'hold' | 'hold-after-dwell' | 'hold-withdrawn' | 'resume' | 'skip' | 'stop';
 
 export interface Intervention {
   kind: InterventionKind;
@@ -150,6 +151,8 @@ export interface RunContext {
   onCadence: boolean;
   /** Start of the swing before, from which a beat is counted; null when no swing came before or it was broken. */
   swingStartUtcMs: number | null;
+  /** The pair that the dwells so far have left open. */
+  pair: OpenPair;
   /** Set by `hold after this dwell`. */
   holdAfterStep: string | null;
   intervention: Intervention | null;
@@ -183,7 +186,10 @@ export type RunEvent =
   | Told<'hold', { by: string; acted: string | null }>
   | Told<'stop', { by: string; acted: string | null }>
   | Told<'hold-after-dwell', { by: string }>
+  | Told<'withdraw-hold', { by: string }>
   | Told<'resume', { by: string; arm: Arm | null }>
+  /** Leaves out the rest of the step whose row this is. */
+  | Told<'skip', { by: string; arm: Arm | null; seq: number }>
   /** The arm of the rig was ended before its time, by a person or by what happened at the rig. */
   | Told<'arm-ended', { why: string }>
   /** Another process, or the same anew, has taken the run up. */

@@ -7,8 +7,9 @@ import { chained } from './chained';
 import { beginRun, deadlineOf, isArmExpected, isRunOver, isUnderWay, wantsMotion } from './chart';
 import { type Advance, CHART_VERSION, type Effect, type RunEvent, type RunSnapshot } from './run-context';
 import { advanceSafely } from './advance-safely';
-import { createPredictor, factsOf, mayResume, plannedDwells, type RunFacts, summaryOf, withDatabase } from './run-facts';
+import { createPredictor, factsOf, plannedDwells, type RunFacts, summaryOf, withDatabase } from './run-facts';
 import type { Answer, RunChange, RunDriverParts } from './run-driver-parts';
+import { RunRequests } from './run-requests';
 import { DATABASE_GRACE_MS, RunSaver } from './run-saver';
 import { ALIVE_MS, RunTimers } from './run-timers';
 import { isOwn, type OwnEffect, snapshotIn, type StoredSnapshot } from './stored-snapshot';
@@ -26,6 +27,7 @@ const LONGEST_BEAT_MS = 1500;
  */
 export class RunDriver {
   readonly runId: string;
+  readonly requests: RunRequests;
   private snapshot: RunSnapshot;
   private chain: ChainHead;
   private readonly inbox: Item[] = [];
@@ -64,6 +66,16 @@ export class RunDriver {
       deadline: (utcMs) => this.enqueue({ event: { type: 'deadline', at: { utcMs, uS: SERVER_U_S } } }),
       beat: () => this.enqueue('beat'),
       alive: () => this.enqueue('alive'),
+    });
+    this.requests = new RunRequests({
+      start,
+      snapshot: () => this.snapshot,
+      now: () => this.now(),
+      arm: () => parts.armNow(),
+      lockedBy: () => this.lockedBy(),
+      isOver: () => this.isOver(),
+      mayNotWrite: () => this.mayNotWrite(),
+      take: (event) => new Promise((done) => this.enqueue({ event, done })),
     });
     this.unsubscribe = link.subscribe((event) => this.heard(event));
     link.setLeaseRule(() => this.mayRenewLease());
@@ -110,20 +122,8 @@ export class RunDriver {
     return { ok: true, serverAtUtcMs: at.utcMs };
   }
 
-  /** Answers when it is saved: it starts motion, so nothing goes to the controller before. */
-  async resume(by: string): Promise<Answer> {
-    const now = this.now();
-    if (this.mayNotWrite())
-      return { ok: false, why: 'The database does not answer at the moment; nothing is set in motion before it does.' };
-    const standing = this.parts.armNow();
-    const arm = standing === null ? null : { name: standing.name, untilUtcMs: standing.untilUtcMs };
-    const allowed = mayResume(this.parts.start, this.snapshot, { utcMs: now.utcMs, arm, lockedBy: this.lockedBy() });
-    if (!allowed.ok) return { ok: false, why: allowed.why };
-    const result = await new Promise<Advance | null>((done) => this.enqueue({ event: { type: 'resume', at: now, by, arm }, done }));
-    const refusal = result?.events.find(({ kind }) => kind === 'resume-refused');
-    if (result === null) return { ok: false, why: 'This server no longer drives the run.' };
-    if (refusal !== undefined) return { ok: false, why: String(refusal.data['why']) };
-    return { ok: true, serverAtUtcMs: now.utcMs };
+  resume(by: string): Promise<Answer> {
+    return this.requests.resume(by);
   }
 
   facts(): RunFacts {

@@ -6,6 +6,7 @@ import { Draft, nothingOut } from './draft';
 import { resumeRefusal } from './halting';
 import { predictEndUtcMs } from './predicted-end';
 import type { Arm, ChartState, InterventionKind, KnownPosition, RunSnapshot } from './run-context';
+import { skipRefusal } from './skipping';
 
 /** What screens and lists show of a run, read off its snapshot. */
 export interface RunFacts {
@@ -28,6 +29,7 @@ export interface RunFacts {
   position: KnownPosition | null;
   intervention: { kind: InterventionKind; by: string; serverAtUtcMs: number; confirmedAtUtcMs: number | null } | null;
   mayResume: { ok: boolean; why: string };
+  maySkip: { ok: boolean; why: string; seq: number | null };
   /** Last sequence number of the event chain. */
   lastSeq: number;
 }
@@ -81,6 +83,20 @@ export function mayResume(start: RunStart, snapshot: RunSnapshot, now: Now): { o
   return { ok: why === null, why: why ?? '' };
 }
 
+/** Whether a person could leave out the rest of the present step now, and if not, what stands in the way. */
+export function maySkip(
+  start: RunStart,
+  snapshot: RunSnapshot,
+  { seq, ...now }: Now & { seq: number | null },
+): { ok: boolean; why: string } {
+  const { state, context } = snapshot;
+  if (state !== 'standing' && state !== 'held') return { ok: false, why: 'Only a dwell, a settle or a wait can be left out.' };
+  if (now.lockedBy !== null) return { ok: false, why: now.lockedBy };
+  const event = { type: 'skip' as const, at: { utcMs: now.utcMs, uS: 0 }, by: '', arm: now.arm, seq: seq ?? 0 };
+  const why = skipRefusal(new Draft(start, event, { context, out: nothingOut }));
+  return { ok: why === null, why: why ?? '' };
+}
+
 export interface FactsInput {
   start: RunStart;
   snapshot: RunSnapshot;
@@ -96,6 +112,7 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, pre
   const { context } = snapshot;
   const open = context.step !== null && context.step.row.outcome === null ? context.step.row : null;
   const { intervention } = context;
+  const seq = context.step?.row.seq ?? null;
   return {
     runId: start.runId,
     state: runStateOf(snapshot),
@@ -120,6 +137,7 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, pre
             confirmedAtUtcMs: intervention.confirmedAtUtcMs,
           },
     mayResume: mayResume(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy }),
+    maySkip: { ...maySkip(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy, seq }), seq },
     lastSeq,
   };
 }
@@ -130,23 +148,6 @@ export function withDatabase(facts: RunFacts, awaySinceUtcMs: number | null): Ru
   const since = new Date(awaySinceUtcMs).toISOString().slice(11, 19);
   const away = `The database is away since ${since} UTC; motion has been brought to rest, and the log is kept here until it is back.`;
   return { ...facts, reason: `${facts.reason} ${away}`.trim() };
-}
-
-interface ResumePlan {
-  /** Dwells still to come, one that is begun anew included. */
-  dwellsLeft: number;
-  finishUtcMs: number;
-}
-
-/** What is left if a held run is resumed now; null while it is not held. */
-export function resumePlan(start: RunStart, { state, context }: RunSnapshot, nowUtcMs: number): ResumePlan | null {
-  if (state !== 'held') return null;
-  const { step } = context;
-  let dwellsLeft = step?.broken === true && step.row.kind === 'dwell' ? 1 : 0;
-  const eachStep = (path: string) => {
-    if (path.split('.').at(-1) === 'dwell') dwellsLeft += 1;
-  };
-  return { finishUtcMs: predictEndUtcMs(start, context, { nowUtcMs, eachStep }), dwellsLeft };
 }
 
 /** Dwells of the plan as it stood at the start. */
@@ -167,7 +168,7 @@ export function createPredictor(start: RunStart): (snapshot: RunSnapshot, nowUtc
     const due = row === undefined ? undefined : expected.get(row.path);
     if (endUtcMs !== null && row !== undefined && due !== undefined && Math.abs(row.startUtcMs - due) < 1000) return endUtcMs;
     expected = new Map();
-    endUtcMs = predictEndUtcMs(start, context, { nowUtcMs, eachStep: (path, startUtcMs) => expected.set(path, startUtcMs) });
+    endUtcMs = predictEndUtcMs(start, context, { nowUtcMs, eachStep: ({ path }, startUtcMs) => expected.set(path, startUtcMs) });
     if (row !== undefined) expected.set(row.path, row.startUtcMs);
     return endUtcMs;
   };

@@ -1,5 +1,6 @@
 import type { StoredRun } from '../interfaces/run-store';
 import { CHART_VERSION, type Effect, type KnownPosition, type RunContext, type RunSnapshot } from './run-context';
+import { noPair, type OpenPair } from './pairs';
 import { nothingKnown } from './position';
 
 /** What the driver performs itself, after it was saved: all but the commands to the controller. */
@@ -17,19 +18,20 @@ export const isOwn = (effect: Effect): effect is OwnEffect => effect.kind !== 'l
 
 /**
  * Contexts of version 1 tell nothing of passes of the home edge: the count is unproved until the next one. Those of version 2 were never
- * written while the database was away.
+ * written while the database was away. Those of version 3 do not tell which dwells make a pair: the next one begins one.
  */
-type OldContext = Omit<RunContext, 'position' | 'databaseAwaySinceUtcMs'> & {
+type OldContext = Omit<RunContext, 'position' | 'databaseAwaySinceUtcMs' | 'pair'> & {
   position?: KnownPosition;
   databaseAwaySinceUtcMs?: number | null;
+  pair?: OpenPair;
 };
 
 /** A snapshot of this or an older version in the shape of this one; null where this version cannot read it. */
 export function restored(snapshot: unknown, chartVersion: number): RunSnapshot | null {
   if (snapshot === null || chartVersion < 1 || chartVersion > CHART_VERSION) return null;
   const { state, context } = snapshot as Omit<RunSnapshot, 'context'> & { context: OldContext };
-  const { position = nothingKnown, databaseAwaySinceUtcMs = null } = context;
-  return { version: CHART_VERSION, state, context: { ...context, position, databaseAwaySinceUtcMs } };
+  const { position = nothingKnown, databaseAwaySinceUtcMs = null, pair = noPair } = context;
+  return { version: CHART_VERSION, state, context: { ...context, position, databaseAwaySinceUtcMs, pair } };
 }
 
 /** @throws Error when the store holds a snapshot of another version: the supervisor quarantines such runs before. */

@@ -69,6 +69,17 @@ export class AccessDirectory {
     return { me: { userId: user.id, name: user.name, email: user.email, session, token }, membership };
   }
 
+  /** The session's account out of memory alone, whatever lab it is for; null when the copy does not hold it. */
+  rememberedSelf(token: string): SignedIn | null {
+    const labIds = [...this.copy.memberships.values()].map(({ labId }) => labId);
+    return labIds.map((labId) => this.remembered(token, labId)).find((found) => found !== null)?.me ?? null;
+  }
+
+  /** Labs with an active run of which the account is a member, out of memory alone. */
+  rememberedMemberships(userId: string): Membership[] {
+    return [...this.copy.memberships].flatMap(([key, membership]) => (key.startsWith(`${userId} `) ? [membership] : []));
+  }
+
   /** Takes a fresh copy for the labs with an active run; keeps the old one when the database does not answer. */
   async refresh(labIds: readonly string[]): Promise<void> {
     this.watched = new Set(labIds);

@@ -1,11 +1,11 @@
 import type { RunStart } from '@/shared/archive/run-records';
-import type { RunView } from '@/shared/contracts/runs';
+import type { RunSummary, RunView } from '@/shared/contracts/runs';
 import type { RunDriver } from '../engine/run-driver';
 import type { RunChange } from '../engine/run-driver-parts';
 import type { RigSupervisor } from '../engine/rig-supervisor';
 import type { RunListRow } from '../store/runs-read';
 import type { LiveHub } from './live/live-hub';
-import { runViewOf } from './run-view';
+import { liveSummaryOf, runViewOf } from './run-view';
 
 export type ActiveRun = RunListRow & { start: RunStart };
 
@@ -38,6 +38,13 @@ export class ActiveRuns {
   view(labId: string, runId: string): RunView | null {
     const found = this.find(labId, runId);
     return found === null ? null : runViewOf(found.run, found.driver.facts());
+  }
+
+  /** The runs of a lab that this process drives, as they are now, newest first. */
+  summaries(labId: string): RunSummary[] {
+    const found = [...this.byId.values()].flatMap((run) => this.find(labId, run.id) ?? []);
+    found.sort((one, other) => other.run.createdAt - one.run.createdAt);
+    return found.map(({ run, driver }) => liveSummaryOf(run, driver.facts()));
   }
 
   /** Labs with a run that this process drives. */

@@ -3,7 +3,7 @@ import type { RouteContract } from '@/shared/contracts/route';
 import { may, roles, type Act } from '@/shared/contracts/roles';
 import type { IdempotencyAnswer, IdempotencyPort } from '../interfaces/idempotency';
 import { checkedResponse } from './check-response';
-import { invalidInput } from './errors';
+import { invalidInput, isDatabaseAway } from './errors';
 import { actOnce, fingerprintOf, idempotencyKeyOf, rethrowKeptProblem } from './idempotent';
 import { linkToNext } from './paging';
 import { notFound, ProblemError } from './problem-error';
@@ -95,11 +95,39 @@ async function identify(
   if (contract.access === 'public') return { me: null, membership: null };
   if (token === null) throw new ProblemError('not-signed-in', 'Sign in first; the request carries no session.');
   const labId = typeof req.params.labId === 'string' ? req.params.labId : '';
-  const remembered = isIntervention(contract) ? services.access.remembered(token, labId) : null;
+  const known = { contract, token, labId, services };
+  const away = contract.fromMemory === true && services.databaseAwaySinceUtcMs() !== null;
+  const remembered = isIntervention(contract) || away ? rememberedFor(known) : null;
+  try {
+    return await identified(known, remembered);
+  } catch (error) {
+    // The keeper of the leases may not have noticed yet.
+    const again = contract.fromMemory === true && isDatabaseAway(error) ? rememberedFor(known) : null;
+    if (again === null) throw error;
+    return identified(known, again);
+  }
+}
+
+interface Asked {
+  contract: RouteContract;
+  token: string;
+  labId: string;
+  services: Services;
+}
+
+type Remembered = { me: SignedIn; membership: Membership | null };
+
+function rememberedFor({ contract, token, labId, services }: Asked): Remembered | null {
+  if (contract.access !== 'signed-in') return services.access.remembered(token, labId);
+  const me = services.access.rememberedSelf(token);
+  return me === null ? null : { me, membership: null };
+}
+
+async function identified({ contract, token, labId, services }: Asked, remembered: Remembered | null): Promise<Remembered> {
   const me = remembered?.me ?? (await services.access.signedIn(token));
   if (me === null)
     throw new ProblemError('session-expired', 'The session has ended. Sign in again; what you typed is still on the screen.');
-  if (contract.access === 'signed-in') return { me, membership: null };
+  if (contract.access === 'public' || contract.access === 'signed-in') return { me, membership: null };
   const membership = remembered?.membership ?? (await services.access.membership(me.userId, labId));
   if (membership === null) throw notFound('lab');
   assertMay(membership, contract.access, services);

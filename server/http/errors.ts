@@ -71,6 +71,9 @@ const saysAway = (error: ErrorLike) =>
 
 const isFileError = (error: ErrorLike) => error.code === 'ENOENT' && error.syscall !== 'connect';
 
+/** Whether a failure says that the database cannot be reached, or is going away. */
+export const isDatabaseAway = (error: unknown): boolean => isSomewhere(error, saysAway);
+
 const awaySince = (utcMs: number | null) => (utcMs === null ? 'at the moment' : `since ${new Date(utcMs).toISOString().slice(11, 19)} UTC`);
 
 /** Every failure as a problem; what nobody foresaw becomes `internal` and tells nothing of the inside. */

@@ -12,6 +12,7 @@ export interface Reviewed {
 export const startSubject = (choice: { protocolId: string; revision: number; massSetId: string }): string =>
   `start ${choice.protocolId} ${String(choice.revision)} ${choice.massSetId}`;
 export const resumeSubject = (runId: string): string => `resume ${runId}`;
+export const skipSubject = (runId: string, seq: number): string => `skip ${runId} ${String(seq)}`;
 
 const lastsMs = 30_000;
 

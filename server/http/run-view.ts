@@ -2,10 +2,18 @@ import type { RunStart } from '@/shared/archive/run-records';
 import type { RunSummary, RunView } from '@/shared/contracts/runs';
 import { factsOf, plannedDwells, type RunFacts } from '../engine/run-facts';
 import { restored } from '../engine/stored-snapshot';
-import { readSteps, type RunListRow, type RunRecord } from '../store/runs-read';
+import { findRun, readSteps, type RunListRow, type RunRecord } from '../store/runs-read';
 import { isoOf, isoOrNull } from './maker';
 import { positionViewOf } from './position-view';
+import { notFound } from './problem-error';
 import type { Services } from './services';
+
+/** @throws ProblemError where the lab has no such run */
+export async function loadRun(services: Services, labId: string, runId: string): Promise<RunRecord> {
+  const run = await findRun(services.database.db, labId, runId);
+  if (run === null) throw notFound('run');
+  return run;
+}
 
 /** What a list shows of a run. */
 export function runSummaryOf(row: RunListRow): RunSummary {
@@ -31,15 +39,22 @@ export async function storedRunView(services: Services, run: RunRecord): Promise
   return runViewOf(run, await factsOfStored(services, run));
 }
 
-/** Columns and facts of the engine as one view. */
-export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts): RunView {
-  const { start } = run;
+/** What a list shows of a run, by the engine that drives it. */
+export function liveSummaryOf(run: RunListRow, facts: RunFacts): RunSummary {
   return {
     ...runSummaryOf(run),
     state: facts.state,
     startedAt: isoOrNull(facts.startedAtUtcMs),
     endedAt: isoOrNull(facts.endedAtUtcMs),
     predictedEndAt: isoOrNull(facts.predictedEndUtcMs),
+  };
+}
+
+/** Columns and facts of the engine as one view. */
+export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts): RunView {
+  const { start } = run;
+  return {
+    ...liveSummaryOf(run, facts),
     notes: start.notes,
     massSetLabel: start.massSetLabel,
     reason: facts.reason,
@@ -59,6 +74,7 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
             confirmedAt: isoOrNull(facts.intervention.confirmedAtUtcMs),
           },
     mayResume: facts.mayResume,
+    maySkip: facts.maySkip,
     lastSeq: facts.lastSeq,
     rig: start.rig,
     protocol: start.protocol,
@@ -66,6 +82,8 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
       start.simulated === null ? null : { trueG: start.simulated.trueG, seed: start.simulated.seed, rateHz: start.simulated.rateHz },
   };
 }
+
+const notDriven = { ok: false, why: 'The run is not driven by this server.' };
 
 async function factsOfStored(services: Services, run: RunRecord): Promise<RunFacts> {
   const dwellsPlanned = plannedDwells(run.start, run.startedAt ?? run.createdAt);
@@ -97,7 +115,8 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
     holdAfterDwell: false,
     position: null,
     intervention: null,
-    mayResume: { ok: false, why: 'The run is not driven by this server.' },
+    mayResume: notDriven,
+    maySkip: { ...notDriven, seq: null },
     lastSeq: run.lastSeq,
   };
 }

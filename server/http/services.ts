@@ -1,6 +1,7 @@
 import type { Logger } from 'pino';
 import type { Arming } from '../engine/arming';
 import type { GuidedMoves } from '../engine/guided-moves';
+import type { MotorSoak } from '../engine/motor-soak';
 import type { RigSupervisor } from '../engine/rig-supervisor';
 import type { ArmKeeper } from '../interfaces/arm-keeper';
 import type { Clock } from '../interfaces/clock';
@@ -49,6 +50,7 @@ export interface Services {
   locks: LockKeeper;
   supervisor: RigSupervisor;
   guided: GuidedMoves;
+  soak: MotorSoak;
   activeRuns: ActiveRuns;
   reviews: Reviews;
   live: LiveHub;
@@ -62,6 +64,8 @@ export interface Services {
   takenUp: Promise<void>;
   /** Since when the database does not answer, as far as the keeper of the rig leases has noticed; null while it does. */
   databaseAwaySinceUtcMs(): number | null;
+  /** Bytes free for this server on the disk of its state folder; null: the system does not tell. */
+  freeBytes(): Promise<number | null>;
   /** Lets everything else have a turn: long work calls it between its parts, so that hold and stop never wait for it. */
   breathe(): Promise<void>;
   /** Tells the workers that a job was queued, so that it need not wait for their next look. */

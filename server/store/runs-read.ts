@@ -198,6 +198,31 @@ export async function lastSampleUtcMs(connection: Connection, channel: { labId: 
   return result.rows[0]?.ms ?? null;
 }
 
+export interface SampleFlow {
+  /** The first and the last instant since the given one at which there is a sample; the last may lie before it. */
+  firstUtcMs: number | null;
+  lastUtcMs: number | null;
+  /** Between two samples one after the other since then; null with fewer than two. */
+  longestGapMs: number | null;
+}
+
+/** How a channel has been filled since an instant. */
+export async function sampleFlow(
+  connection: Connection,
+  channel: { labId: string; channelId: string },
+  sinceUtcMs: number,
+): Promise<SampleFlow> {
+  const result = await connection.pool.query<SampleFlow>(
+    `with recent as (select at, at - lag(at) over (order by at) as gap from samples where lab_id = $1 and channel_id = $2 and at >= $3)
+     select (extract(epoch from min(at)) * 1000)::double precision as "firstUtcMs",
+       (extract(epoch from coalesce(max(at), (select max(at) from samples where lab_id = $1 and channel_id = $2))) * 1000)::double precision as "lastUtcMs",
+       (extract(epoch from max(gap)) * 1000)::double precision as "longestGapMs"
+     from recent`,
+    [channel.labId, channel.channelId, new Date(sinceUtcMs)],
+  );
+  return result.rows[0] ?? { firstUtcMs: null, lastUtcMs: null, longestGapMs: null };
+}
+
 /** Runs on rigs, of all labs, that have not ended. */
 export const unfinishedRuns = (db: Handle): Promise<RunRecord[]> =>
   db

@@ -3,6 +3,7 @@ import * as calls from './calls';
 import * as data from './data';
 import * as doors from './doors';
 import * as evaluations from './evaluations';
+import * as goingOn from './going-on';
 import * as link from './link';
 import * as people from './people';
 import * as protocols from './protocols';
@@ -28,6 +29,7 @@ export const routes: readonly RouteContract[] = [
   reviews,
   protocols,
   runs,
+  goingOn,
   schedules,
   doors,
   data,

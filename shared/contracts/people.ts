@@ -33,6 +33,7 @@ export const getMe = defineRoute({
   method: 'GET',
   path: '/session',
   access: 'signed-in',
+  fromMemory: true,
   status: 200,
   response: meSchema,
   problems: [],

@@ -189,6 +189,8 @@ export const startCheckSchema = z.strictObject({
   title: z.string(),
   state: z.enum(['pass', 'fail', 'note']),
   detail: z.string(),
+  /** What was measured for it just now; null: not known. */
+  figures: z.array(z.strictObject({ name: z.string(), value: z.number().nullable(), unit: z.enum(['ms', 's', 'ppm', 'deg', 'GiB', '']) })),
 });
 export type StartCheck = z.infer<typeof startCheckSchema>;
 export const startChecks = defineRoute({

@@ -23,6 +23,8 @@ export interface RouteContract {
   /** Media type of a reply or request that is not JSON. */
   readonly produces?: 'text/event-stream' | 'text/calendar' | 'text/csv' | 'application/zip' | 'application/json';
   readonly consumes?: 'text/csv';
+  /** While the database is away it is answered out of the memory of the server that drives the runs, as far as that goes. */
+  readonly fromMemory?: true;
   /** A command: needs an `Idempotency-Key` header, a repeat returns the first answer. */
   readonly idempotent?: true;
   /** Replies carry an ETag; a changing request needs `If-Match`. */

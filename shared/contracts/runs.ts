@@ -11,7 +11,7 @@ export type RunState = z.infer<typeof runStateSchema>;
 
 /** The three honest stages of hold and stop: sent (the phone's own), the server has it, the controller confirmed. */
 export const interventionSchema = z.strictObject({
-  kind: z.enum(['hold', 'hold-after-dwell', 'resume', 'stop']),
+  kind: z.enum(['hold', 'hold-after-dwell', 'hold-withdrawn', 'resume', 'skip', 'stop']),
   by: z.string(),
   serverAt: instantSchema,
   /** When the controller itself said that the turntable stands still; null until then. */
@@ -80,6 +80,8 @@ export const runViewSchema = runSummarySchema.extend({
   position: positionViewSchema.nullable(),
   intervention: interventionSchema.nullable(),
   mayResume: z.strictObject({ ok: z.boolean(), why: z.string() }),
+  /** Whether the rest of the present step, whose row is `seq`, may be left out. */
+  maySkip: z.strictObject({ ok: z.boolean(), why: z.string(), seq: z.number().int().nullable() }),
   /** Last sequence number of the event chain. */
   lastSeq: z.number().int(),
   rig: rigDocumentSchema,
@@ -103,6 +105,7 @@ const runProgressSchema = runViewSchema.pick({
   position: true,
   intervention: true,
   mayResume: true,
+  maySkip: true,
   lastSeq: true,
 });
 
@@ -137,13 +140,12 @@ const labRuns = '/labs/:labId/runs';
 const path = `${labRuns}/:runId` as const;
 const command = z.strictObject({ tappedAt: instantSchema.optional() });
 /** Of what sets masses in motion. */
-const motionFields = {
+export const motionFields = {
   /** When the tap was made, by the phone's clock corrected to the server's: the act expires 5 s after it. */
   tappedAt: instantSchema,
   /** Of the review that was confirmed; counts once, for 30 s. */
   reviewToken: z.string().max(200),
 };
-const accepted = z.strictObject({ runId: idSchema, serverAt: instantSchema });
 
 export const listRuns = defineRoute({
   name: 'listRuns',
@@ -151,6 +153,7 @@ export const listRuns = defineRoute({
   method: 'GET',
   path: labRuns,
   access: 'read',
+  fromMemory: true,
   status: 200,
   query: pageQuerySchema.extend({ rigId: idSchema.optional(), active: z.enum(['true']).optional() }),
   response: pageOf(runSummarySchema),
@@ -212,11 +215,13 @@ export const getRun = defineRoute({
   method: 'GET',
   path,
   access: 'read',
+  fromMemory: true,
   status: 200,
   response: runViewSchema,
   problems: ['not-found'],
 });
-const intervention = <L extends string>(
+/** The contract of an act on a run that goes on. */
+export const intervention = <L extends string>(
   leaf: L,
   route: { name: string; summary: string; access: 'run.hold' | 'run.stop' | 'run.resume' },
 ) =>
@@ -227,7 +232,7 @@ const intervention = <L extends string>(
     status: 202,
     idempotent: true,
     body: command,
-    response: accepted,
+    response: z.strictObject({ runId: idSchema, serverAt: instantSchema }),
     problems: ['invalid-input', 'not-found', 'not-possible-now', 'key-reused', 'still-running'],
   });
 export const holdRun = intervention('hold', {
@@ -240,11 +245,6 @@ export const holdAfterDwell = intervention('hold-after-dwell', {
   summary: 'Hold when the present dwell has ended',
   access: 'run.hold',
 });
-export const resumeRun = defineRoute({
-  ...intervention('resume', { name: 'resumeRun', summary: 'Resume a held run, reviewed', access: 'run.resume' }),
-  body: z.strictObject(motionFields),
-  problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'not-reviewed', 'locked', 'key-reused', 'still-running'],
-});
 export const stopRun = intervention('stop', { name: 'stopRun', summary: 'Stop: decelerate and end the run', access: 'run.stop' });
 export const liveRun = defineRoute({
   name: 'liveRun',
@@ -252,6 +252,7 @@ export const liveRun = defineRoute({
   method: 'GET',
   path: `${path}/live`,
   access: 'read',
+  fromMemory: true,
   status: 200,
   produces: 'text/event-stream',
   problems: ['not-found'],

@@ -250,10 +250,10 @@ function encodeChange({ events, steps, view }: Omit<LiveChange, 'view'> & { view
 /** Rig and protocol went out with the first snapshot: with every change they would be nine tenths of all that is sent. */
 function progressOf(view: RunView): LiveMessages['progress'] {
   const { state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt } = view;
-  const { dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, lastSeq } = view;
+  const { dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq } = view;
   return {
     ...{ state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt },
-    ...{ dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, lastSeq },
+    ...{ dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq },
   };
 }
 

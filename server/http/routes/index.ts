@@ -5,6 +5,7 @@ import { callRoutes } from './calls';
 import { dataRoutes } from './data';
 import { doorRoutes } from './doors';
 import { evaluationRoutes } from './evaluations';
+import { interventionRoutes } from './interventions';
 import { lineRoutes } from './line';
 import { liveRoutes } from './live';
 import { peopleRoutes } from './people';
@@ -24,6 +25,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...lineRoutes,
   ...protocolRoutes,
   ...runRoutes,
+  ...interventionRoutes,
   ...liveRoutes,
   ...scheduleRoutes,
   ...doorRoutes,

@@ -10,6 +10,7 @@ import { openInvitations, withdrawInvitation, type Invitation } from '@/server/s
 import { changeLab } from '@/server/store/labs';
 import { changeMember, memberOf, membersOf, membershipsOf, type Member } from '@/server/store/people';
 import type { Role } from '@/shared/contracts/roles';
+import { isDatabaseAway } from '../errors';
 import { isoOf } from '../maker';
 import { originForLinks } from '../origin';
 import { decodeCursor, pageFrom } from '../paging';
@@ -79,7 +80,15 @@ const sessionRoutes = [
     return meOfToken(services, outcome.user, outcome.token);
   }),
 
-  mount(contracts.getMe, ({ me, services }) => meOf(services, { id: me.userId, name: me.name, email: me.email }, me.session.expiresAt)),
+  mount(contracts.getMe, async ({ me, services }) => {
+    const user = { id: me.userId, name: me.name, email: me.email };
+    try {
+      return await meOf(services, user, me.session.expiresAt);
+    } catch (error) {
+      if (!isDatabaseAway(error)) throw error;
+      return { user, memberships: services.access.rememberedMemberships(me.userId), sessionExpiresAt: me.session.expiresAt.toISOString() };
+    }
+  }),
 
   mount(contracts.signOut, async ({ me, services, clearSession }) => {
     await signOut(authOf(services), { token: me.token, user: { id: me.userId, name: me.name } });

@@ -7,7 +7,8 @@ import { notFound, ProblemError } from '../problem-error';
 import { knowsLink, knowsRevision, rigSummaryOf, rigTag, rigViewOf } from '../rig-view';
 import { mount, type Membership, type SignedIn } from '../route-context';
 import type { Services } from '../services';
-import { busyWords, makeStartChecks } from '../start-checks';
+import { makeStartChecks } from '../start-checks';
+import { busyWords } from '../start-checks-lab';
 import { findRevision } from '@/server/store/protocols';
 
 type Caller = { me: SignedIn; membership: Membership; services: Services };

@@ -44,7 +44,7 @@ const protocol = {
   document: { formatVersion: 1, name: 'Overnight reversals', steps: [{ kind: 'home' }] },
   revisions: [{ number: 7, issuedAt: '2031-03-13T18:00:00Z', issuedBy: 'Ada Thornfield', note: '' }],
 };
-const check = (code: string, state: string, detail: string) => ({ code, title: code, state, detail });
+const check = (code: string, state: string, detail: string, figures: object[] = []) => ({ code, title: code, state, detail, figures });
 const run = {
   id: 'run-1',
   rigId: 'rig-1',
@@ -86,7 +86,10 @@ async function open(options: { armed: boolean; locks?: LockView[] }): Promise<Fa
   lab.on('GET /labs/lab-1/rigs/rig-1/start-checks', () => ({
     body: {
       checks: [
-        check('link', 'pass', 'The controller answers.'),
+        check('link', 'pass', 'The controller answers.', [
+          { name: 'round trip', value: 0.8, unit: 'ms' },
+          { name: 'last reply', value: 0.4, unit: 's' },
+        ]),
         check('armed', options.armed ? 'pass' : 'fail', 'Arm the rig on site first.'),
       ],
       mayStart: options.armed,
@@ -142,6 +145,13 @@ test('a start that is not allowed cannot be sent, and what stands against it com
   fireEvent.mouseDown(screen.getByTestId('start-run'));
   await wait(3000);
   expect(sent(lab)).toEqual([]);
+});
+
+test('each check shows what it has measured just now', async () => {
+  await open({ armed: true });
+  const words = (screen.getByTestId('check-link').textContent ?? '').replaceAll('\u202f', ' ');
+  expect(words).toContain('round trip 0.80 ms');
+  expect(words).toContain('last reply 0.4 s');
 });
 
 test('a start is sent once, with the time of the tap, and leads to the run', async () => {

@@ -36,6 +36,7 @@ describe('what arrives', () => {
       position,
       intervention,
       mayResume,
+      maySkip,
     } = viewAt(nowUtcMs);
     const same = {
       startedAt,
@@ -48,6 +49,7 @@ describe('what arrives', () => {
       position,
       intervention,
       mayResume,
+      maySkip,
     };
     const [, row] = rowsAt(nowUtcMs);
     const progress = (lastSeq: number, change: Partial<{ state: 'held'; reason: string }>): LiveMessage => ({

@@ -1,6 +1,7 @@
 import { act, fireEvent, render, screen } from '@testing-library/react';
 import { useState } from 'react';
-import { ResumeExpired, resumeOnce } from '@/components/runs/use-intervention';
+import { callOnce, serverNowIso, Unanswered } from '@/components/api';
+import { resumeRun } from '@/shared/contracts/going-on';
 
 /** A resume moves masses: it is sent once, counts for 5 s, and is never repeated by the page. */
 
@@ -10,9 +11,10 @@ let answer: (init: RequestInit) => Promise<Response>;
 function Resume() {
   const [said, setSaid] = useState('nothing');
   const resume = () => {
-    resumeOnce({ labId: 'lab-1', runId: 'run-1' }, 'token-1').then(
+    const body = { tappedAt: serverNowIso(), reviewToken: 'token-1' };
+    callOnce(resumeRun, { params: { labId: 'lab-1', runId: 'run-1' }, body }).then(
       () => setSaid('accepted'),
-      (error: unknown) => setSaid(error instanceof ResumeExpired ? 'expired' : 'failed'),
+      (error: unknown) => setSaid(error instanceof Unanswered ? 'unanswered' : 'failed'),
     );
   };
   return (
@@ -39,9 +41,9 @@ async function tapAndWait(ms: number) {
   return screen.getByRole('button').textContent;
 }
 
-test('without a network it fails at once and is not sent again', async () => {
+test('without a network nobody knows what became of it, and it is not sent again', async () => {
   answer = () => Promise.reject(new TypeError('network'));
-  expect(await tapAndWait(60_000)).toBe('failed');
+  expect(await tapAndWait(60_000)).toBe('unanswered');
   expect(requests).toHaveLength(1);
 });
 
@@ -50,7 +52,7 @@ test('an answer that does not come in 5 s is no longer waited for, and the reque
     new Promise((_, reject) => init.signal?.addEventListener('abort', () => reject(new DOMException('aborted', 'AbortError'))));
   expect(await tapAndWait(4900)).toBe('nothing');
   await act(() => jest.advanceTimersByTimeAsync(200));
-  expect(screen.getByRole('button').textContent).toBe('expired');
+  expect(screen.getByRole('button').textContent).toBe('unanswered');
   expect(requests).toHaveLength(1);
   expect(requests[0]?.signal?.aborted).toBe(true);
 });

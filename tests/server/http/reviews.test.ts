@@ -1,4 +1,4 @@
-import { demoIds } from '@/db/demo/seed';
+import { demoIds, demoPeople } from '@/db/demo/seed';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol } from '@/tests/support/lab-server';
 
@@ -48,6 +48,9 @@ describe('a resume', () => {
     const review = await lab.as('operator', 'POST', `${runs}/${runId}/resume-review`).expect(201);
     // The first dwell of 30 s is begun anew, then a swing and the second one.
     expect(review.body.dwellsLeft).toBe(2);
+    expect(review.body.firstMove).toBe('swing to far (−20.18°)');
+    // No dwell is done yet; two dwells of this rig and length leave what the planner says of them.
+    expect(review.body.plannedU).toEqual({ soFar: null, atEnd: expect.any(Number) });
     const leftS = (Date.parse(review.body.finishAt) - lab.clock.utcMs()) / 1000;
     expect(leftS).toBeGreaterThan(60);
     expect(leftS).toBeLessThan(120);
@@ -55,4 +58,73 @@ describe('a resume', () => {
     await lab.until(runId, 'finished');
     expect(Math.abs(Date.parse((await lab.view(runId)).endedAt ?? '') - Date.parse(review.body.finishAt))).toBeLessThan(2_000);
   });
+});
+
+describe('a skip', () => {
+  const reachDwell = async () => {
+    const runId = await lab.run(quickProtocol());
+    await lab.advance(3_600_000, () => lab.services.supervisor.driverOf(runId)?.facts().current?.kind === 'dwell');
+    const { seq } = (await lab.view(runId)).maySkip as { seq: number };
+    return { runId, seq };
+  };
+  const review = (runId: string, seq: number) => lab.as('operator', 'POST', `${runs}/${runId}/skip-review`).send({ seq });
+  const skip = (runId: string, body: { seq: number; reviewToken: string }) =>
+    lab.as('operator', 'POST', `${runs}/${runId}/skip`).send({ tappedAt: lab.nowIso(), ...body });
+
+  test('tells what it leaves out and breaks, counts once for that very step, and is audited', async () => {
+    const { runId, seq } = await reachDwell();
+    const { body } = await review(runId, seq).expect(201);
+    expect(body).toMatchObject({
+      seq,
+      kind: 'dwell',
+      station: 'near',
+      notGoodPath: null,
+      dwellsLeft: 1,
+      firstMove: 'swing to far (−20.18°)',
+    });
+    expect(body.leftS).toBeGreaterThan(25);
+    expect((await review(runId, seq + 1).expect(409)).body.detail).toContain('is over');
+    // A review of a resume or of another step is none of this one.
+    const resumes = lab.services.reviews.issue({
+      userId: demoPeople.find(({ role }) => role === 'operator')?.id ?? '',
+      rigId: demoIds.rig,
+      subject: `resume ${runId}`,
+    }).token;
+    expect((await skip(runId, { seq, reviewToken: resumes }).expect(409)).body.code).toBe('not-reviewed');
+    await skip(runId, { seq, reviewToken: body.token }).expect(202);
+    expect((await skip(runId, { seq, reviewToken: body.token }).expect(409)).body.code).toBe('not-reviewed');
+    const view = await lab.until(runId, 'finished');
+    expect(Math.abs(Date.parse(view.endedAt ?? '') - Date.parse(body.finishAt))).toBeLessThan(2_000);
+    const { items } = (await lab.as('viewer', 'GET', `${runs}/${runId}/steps`).expect(200)).body;
+    const dwells = items.filter(({ kind }: { kind: string }) => kind === 'dwell');
+    expect(dwells.map(({ outcome, good }: { outcome: string; good: boolean }) => [outcome, good])).toEqual([
+      ['skipped', false],
+      ['done', false],
+    ]);
+    const audit = await lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`).expect(200);
+    expect(audit.body.items).toContainEqual(expect.objectContaining({ kind: 'run.step-skipped', who: 'Ilse Marrowby' }));
+  });
+
+  test('of a tap that is older than 5 s moves nothing', async () => {
+    const { runId, seq } = await reachDwell();
+    const { body } = await review(runId, seq).expect(201);
+    const tappedAt = new Date(lab.clock.utcMs() - 6_000).toISOString();
+    const late = await lab.as('operator', 'POST', `${runs}/${runId}/skip`).send({ tappedAt, seq, reviewToken: body.token }).expect(409);
+    expect(late.body.detail).toContain('it counts for 5 s');
+    expect((await lab.view(runId)).current).toMatchObject({ seq, outcome: null });
+    await lab.intervene(runId, 'stop').expect(202);
+    await lab.until(runId, 'stopped');
+  });
+});
+
+test('a hold after this dwell is withdrawn by who may resume, and not by a viewer', async () => {
+  const runId = await lab.run(quickProtocol());
+  await lab.advance(3_600_000, () => lab.services.supervisor.driverOf(runId)?.facts().current?.kind === 'dwell');
+  await lab.intervene(runId, 'hold-after-dwell', { who: 'viewer' }).expect(202);
+  await lab.services.idle();
+  const withdraw = (who: 'viewer' | 'operator') => lab.as(who, 'POST', `${runs}/${runId}/withdraw-hold`).send({ tappedAt: lab.nowIso() });
+  await withdraw('viewer').expect(403);
+  await withdraw('operator').expect(202);
+  expect(await lab.view(runId)).toMatchObject({ holdAfterDwell: false, intervention: { kind: 'hold-withdrawn', by: 'Ilse Marrowby' } });
+  await lab.until(runId, 'finished');
 });

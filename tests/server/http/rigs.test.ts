@@ -4,9 +4,11 @@ import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer } from '@/tests/support/lab-server';
 
 const database = databaseOfThisFile();
+const gib = 2 ** 30;
+let free: number | null = 40 * gib;
 let lab: LabServer;
 beforeAll(async () => {
-  lab = await LabServer.start(database());
+  lab = await LabServer.start(database(), { overrides: { freeBytes: () => Promise.resolve(free) } });
 }, 60_000);
 afterAll(() => lab.stop());
 
@@ -115,7 +117,9 @@ describe('the line', () => {
 describe('start checks', () => {
   const checks = async (query = `protocolId=${demoIds.shortProtocol}&revision=1`) =>
     (await lab.as('operator', 'GET', `${rig}/start-checks?${query}`).expect(200)).body;
-  const stateOf = async (code: string) => (await checks()).checks.find((check: { code: string }) => check.code === code);
+  type Told = { code: string; figures: { name: string; value: number | null }[] };
+  const stateOf = async (code: string) => (await checks()).checks.find((check: Told) => check.code === code);
+  const figureOf = ({ figures }: Told, wanted: string) => figures.find(({ name }) => name === wanted)?.value ?? null;
 
   test('say what is missing and when the run would finish', async () => {
     await lab.advance(40_000);
@@ -143,7 +147,46 @@ describe('start checks', () => {
     await database().connection.pool.query('delete from samples');
     expect(await stateOf('data')).toMatchObject({ state: 'fail', detail: 'The channel deflection has no sample yet.' });
     await lab.advance(40_000);
+    expect(await stateOf('data')).toMatchObject({ state: 'note', detail: expect.stringContaining('10 min without a gap') });
+    await lab.advance(600_000);
     expect(await stateOf('data')).toMatchObject({ state: 'pass' });
+    const { connection } = database();
+    await connection.pool.query('delete from samples where at between $1 and $2', [
+      new Date(lab.clock.utcMs() - 200_000),
+      new Date(lab.clock.utcMs() - 100_000),
+    ]);
+    const gapped = await stateOf('data');
+    expect(gapped).toMatchObject({ state: 'note', detail: expect.stringContaining('had a gap') });
+    expect(figureOf(gapped, 'longest gap')).toBeCloseTo(100, 0);
+  });
+
+  test('carry what was measured: line, clock, travel, disk, database, arm and motor', async () => {
+    const report = await checks();
+    const told = new Map(report.checks.map((one: Told) => [one.code, one]));
+    expect([...told.keys()].sort()).toEqual(
+      'armed cautions clock data database disk free homed interlock link lock protocol soak still supply travel'.split(' '),
+    );
+    const value = (code: string, name: string) => figureOf(told.get(code) as Told, name) as number;
+    expect(value('link', 'last reply')).toBeGreaterThanOrEqual(0);
+    expect(value('link', 'last reply')).toBeLessThan(2);
+    expect(value('link', 'round trip')).toBeGreaterThanOrEqual(0);
+    expect(value('clock', 'u of an instant')).toBeGreaterThan(0);
+    // near +20.18 deg in a travel of ±175 deg
+    expect(value('travel', 'left')).toBeCloseTo(154.82, 1);
+    expect(value('disk', 'free')).toBe(40);
+    expect(value('disk', 'need')).toBeGreaterThan(1);
+    expect(value('database', 'answer')).toBeGreaterThanOrEqual(0);
+    const { armed } = Object.fromEntries(told) as { armed: Told };
+    expect(Number(figureOf(armed, 'armed for')) - Number(figureOf(armed, 'to spare'))).toBeCloseTo(report.durationS, 3);
+  });
+
+  test('want room on the disk, and say how much is to be made', async () => {
+    free = 0.5 * gib;
+    expect(await stateOf('disk')).toMatchObject({ state: 'fail', detail: expect.stringMatching(/make room for 0\.5\sGiB/) });
+    expect((await checks()).mayStart).toBe(false);
+    free = null;
+    expect(await stateOf('disk')).toMatchObject({ state: 'note' });
+    free = 40 * gib;
   });
 
   test('say of nothing that it is well while nothing talks at the line', async () => {

@@ -1,0 +1,202 @@
+import * as goingOn from '@/shared/contracts/going-on';
+import * as reviewContracts from '@/shared/contracts/reviews';
+import * as contracts from '@/shared/contracts/runs';
+import { formatDegrees } from '@/shared/lib/format-angle';
+import type { LeafStep } from '@/shared/protocol/cursor';
+import type { RigDocument } from '@/shared/rig/document';
+import { resumePlan, skipPlan, type RemainingPlan } from '@/server/engine/remaining-plan';
+import type { RunDriver } from '@/server/engine/run-driver';
+import type { Answer } from '@/server/engine/run-driver-parts';
+import type { Clock } from '@/server/interfaces/clock';
+import { findRevision } from '@/server/store/protocols';
+import { findMassSet, findRig } from '@/server/store/rigs';
+import * as store from '@/server/store/runs-read';
+import { auditLater } from '../audited';
+import { assertFreshTap, type Caller } from '../begin-run';
+import { isoOf } from '../maker';
+import { notFound, ProblemError } from '../problem-error';
+import { mount } from '../route-context';
+import { resumeSubject, skipSubject, startSubject } from '../reviews';
+import { loadRun } from '../run-view';
+import type { Services } from '../services';
+
+const longestWaitMs = 20_000;
+
+/** Waits for something, but no longer than this. */
+async function atMost(longestMs: number, awaited: Promise<unknown>, clock: Clock): Promise<void> {
+  let cancel = () => undefined as void;
+  const longest = new Promise<void>((resolve) => {
+    cancel = clock.after(longestMs, resolve);
+  });
+  await Promise.race([awaited, longest]);
+  cancel();
+}
+
+/** The driver of a run; for one that is over, or that nobody drives, the reason why nothing can be done with it. */
+async function driverOf(services: Services, labId: string, runId: string): Promise<RunDriver> {
+  const atOnce = services.activeRuns.find(labId, runId);
+  if (atOnce !== null) return atOnce.driver;
+  const run = await loadRun(services, labId, runId);
+  if (run.rehearsal) throw new ProblemError('not-possible-now', 'A rehearsal runs by itself in fast time; nobody can step in.');
+  if (['finished', 'stopped', 'failed'].includes(run.state))
+    throw new ProblemError(
+      'not-possible-now',
+      `The run is over: it ${run.state === 'failed' ? 'failed' : run.state === 'stopped' ? 'was stopped' : 'has finished'}.`,
+    );
+  // A server that has just started may still be taking up the runs it found.
+  await atMost(longestWaitMs, services.takenUp, services.clock);
+  const later = services.activeRuns.find(labId, runId);
+  if (later !== null) return later.driver;
+  const why =
+    services.supervisor.quarantinedOf(run.rigId)?.why ??
+    'No server drives this run at the moment, so nothing keeps the turntable moving: its motion lease lapses within 2 s.';
+  throw new ProblemError('not-possible-now', `${why} Use the switch at the rig if anything moves.`);
+}
+
+const longestKeepingMs = 1_000;
+
+/** The controller has it already; the answer waits until it is safe on a disk, so that nothing that was answered can be forgotten. */
+async function accepted({ clock }: Services, runId: string, answer: Answer): Promise<{ runId: string; serverAt: string }> {
+  if (!answer.ok) throw new ProblemError('not-possible-now', answer.why);
+  if (answer.kept !== undefined) await atMost(longestKeepingMs, answer.kept, clock);
+  return { runId, serverAt: isoOf(answer.serverAtUtcMs) };
+}
+
+const reviewRoutes = [
+  mount(reviewContracts.reviewStart, async ({ params, body, me, membership, services }) => {
+    const { db } = services.database;
+    const rig = await findRig(db, membership.labId, params.rigId);
+    if (rig === null) throw notFound('rig');
+    if ((await findRevision(db, { labId: membership.labId, protocolId: body.protocolId }, body.revision)) === null)
+      throw notFound('protocol revision');
+    if ((await findMassSet(db, { labId: membership.labId, rigId: rig.id }, body.massSetId)) === null) throw notFound('mass set');
+    const { token, expiresUtcMs } = services.reviews.issue({ userId: me.userId, rigId: rig.id, subject: startSubject(body) });
+    return { token, expiresAt: isoOf(expiresUtcMs) };
+  }),
+
+  mount(reviewContracts.reviewResume, async ({ params, me, membership, services }) => {
+    const driver = await driverOf(services, membership.labId, params.runId);
+    const found = services.activeRuns.find(membership.labId, params.runId);
+    const plan = found === null ? null : resumePlan(found.run.start, driver.state(), services.clock.utcMs());
+    if (found === null || plan === null) throw new ProblemError('not-possible-now', 'The run is not held, so there is nothing to resume.');
+    const { rigId, start } = found.run;
+    const { token, expiresUtcMs } = services.reviews.issue({ userId: me.userId, rigId, subject: resumeSubject(params.runId) });
+    return { token, expiresAt: isoOf(expiresUtcMs), ...remainingOf(plan, start.rig) };
+  }),
+
+  mount(reviewContracts.reviewSkip, async ({ params, body, me, membership, services }) => {
+    const driver = await driverOf(services, membership.labId, params.runId);
+    const found = services.activeRuns.find(membership.labId, params.runId);
+    const plan = found === null ? null : skipPlan(found.run.start, driver.state(), services.clock.utcMs());
+    if (found === null || plan === null)
+      throw new ProblemError('not-possible-now', 'No dwell, settle or wait is under way, so there is nothing to leave out.');
+    if (plan.seq !== body.seq)
+      throw new ProblemError('not-possible-now', 'The step that was to be left out is over. Look at the run again.');
+    const { rigId, start } = found.run;
+    const { seq, path, kind, label, station, leftS, notGoodPath } = plan;
+    const { token, expiresUtcMs } = services.reviews.issue({ userId: me.userId, rigId, subject: skipSubject(params.runId, seq) });
+    const leavesOut = { seq, path, kind, label, station, leftS, notGoodPath };
+    return { token, expiresAt: isoOf(expiresUtcMs), ...remainingOf(plan, start.rig), ...leavesOut };
+  }),
+];
+
+const remainingOf = ({ dwellsLeft, finishUtcMs, firstMotion, relativeU }: RemainingPlan, rig: RigDocument) => ({
+  dwellsLeft,
+  finishAt: isoOf(finishUtcMs),
+  firstMove: firstMotion === null ? 'nothing moves' : moveWords(firstMotion, rig),
+  plannedU: relativeU,
+});
+
+function moveWords(step: LeafStep, { stations }: RigDocument): string {
+  if (step.kind !== 'swing') return 'home: find the edge of the home flag';
+  if (typeof step.to !== 'string') return `swing to ${formatDegrees(step.to.angle_deg)}`;
+  const station = stations[step.to];
+  return station === undefined ? `swing to ${step.to}` : `swing to ${step.to} (${formatDegrees(station.value)})`;
+}
+
+const actRoutes = [
+  mount(contracts.holdRun, async (context) => {
+    const { params, me, membership, services } = context;
+    const answer = (await driverOf(services, membership.labId, params.runId)).hold(me.name);
+    auditLater(context, 'run.hold-asked', { runId: params.runId });
+    return accepted(services, params.runId, answer);
+  }),
+
+  mount(contracts.holdAfterDwell, async (context) => {
+    const { params, me, membership, services } = context;
+    const answer = (await driverOf(services, membership.labId, params.runId)).holdAfterDwell(me.name);
+    auditLater(context, 'run.hold-after-dwell-asked', { runId: params.runId });
+    return accepted(services, params.runId, answer);
+  }),
+
+  mount(goingOn.withdrawHold, async (context) => {
+    const { params, body, me, membership, services } = context;
+    const driver = await driverOf(services, membership.labId, params.runId);
+    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'withdraw the hold');
+    const answer = await driver.requests.withdrawHold(me.name);
+    if (answer.ok) auditLater(context, 'run.hold-withdrawn', { runId: params.runId });
+    return accepted(services, params.runId, answer);
+  }),
+
+  mount(goingOn.resumeRun, async (context) => {
+    const { params, body, me, membership, services } = context;
+    const driver = await driverOf(services, membership.labId, params.runId);
+    // After the waiting for a server that has just begun: what grew old meanwhile moves nothing.
+    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'resume');
+    const rigId = rigOf(context, params.runId);
+    services.reviews.take(body.reviewToken, { userId: me.userId, rigId, subject: resumeSubject(params.runId) });
+    const answer = await driver.resume(me.name);
+    assertNothingInTheWay(services, { driver, rigId, answer });
+    auditLater(context, 'run.resumed', { runId: params.runId });
+    return accepted(services, params.runId, answer);
+  }),
+
+  mount(goingOn.skipStep, async (context) => {
+    const { params, body, me, membership, services } = context;
+    const driver = await driverOf(services, membership.labId, params.runId);
+    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'skip');
+    const rigId = rigOf(context, params.runId);
+    services.reviews.take(body.reviewToken, { userId: me.userId, rigId, subject: skipSubject(params.runId, body.seq) });
+    const answer = await driver.requests.skip(me.name, body.seq);
+    assertNothingInTheWay(services, { driver, rigId, answer });
+    auditLater(context, 'run.step-skipped', { runId: params.runId, seq: body.seq });
+    return accepted(services, params.runId, answer);
+  }),
+
+  mount(contracts.stopRun, async (context) => {
+    const { params, me, membership, services } = context;
+    const found = services.activeRuns.find(membership.labId, params.runId);
+    if (found === null) {
+      const run = await loadRun(services, membership.labId, params.runId);
+      if (run.state === 'stopped') return { runId: run.id, serverAt: isoOf(services.clock.utcMs()) };
+      if (services.supervisor.quarantinedOf(run.rigId)?.start.runId === run.id) return endQuarantined(context, run);
+    }
+    const answer = (await driverOf(services, membership.labId, params.runId)).stop(me.name);
+    auditLater(context, 'run.stop-asked', { runId: params.runId });
+    return accepted(services, params.runId, answer);
+  }),
+];
+
+const rigOf = ({ services, membership }: Caller, runId: string): string =>
+  services.activeRuns.find(membership.labId, runId)?.run.rigId ?? '';
+
+/** A refusal of what moves masses, by what stands in its way. */
+function assertNothingInTheWay(services: Services, { driver, rigId, answer }: { driver: RunDriver; rigId: string; answer: Answer }): void {
+  if (answer.ok) return;
+  const locked = services.locks.lockedBy(rigId) !== null;
+  const disarmed = !driver.isOver() && services.arms.armOf(rigId) === null;
+  throw new ProblemError(locked ? 'locked' : disarmed ? 'not-armed' : 'not-possible-now', answer.why);
+}
+
+/** Ends a run that this version cannot drive: nothing moves, and the rig is free again. */
+async function endQuarantined(caller: Caller, run: store.RunRecord): Promise<{ runId: string; serverAt: string }> {
+  const { services, me } = caller;
+  const nowUtcMs = services.clock.utcMs();
+  const why = services.supervisor.quarantinedOf(run.rigId)?.why ?? '';
+  await store.markRunFailed(services.database.db, run, { why: `${why} Ended by ${me.name}.`, nowUtcMs });
+  services.supervisor.release(run.rigId);
+  auditLater(caller, 'run.stop-asked', { runId: run.id });
+  return { runId: run.id, serverAt: isoOf(nowUtcMs) };
+}
+
+export const interventionRoutes = [...reviewRoutes, ...actRoutes];
