@@ -3,7 +3,7 @@ import type { Role } from '@/shared/contracts/roles';
 import type { Clock } from '../interfaces/clock';
 import type { Session, SessionPort } from '../interfaces/sessions';
 import type { Database } from '../store/database';
-import { rolesOf, sessionAdapter, type SessionFacts } from '../store/session-rows';
+import { rolesOf, sessionAdapter, type AccountFacts, type SessionFacts } from '../store/session-rows';
 
 interface Attributes extends SessionFacts {
   /** End of the idle limit, UTC ms. */
@@ -44,6 +44,7 @@ export function createSessions(parts: SessionParts): SessionPort {
   const lucia = new Lucia(endless(sessionAdapter(db)), {
     sessionExpiresIn: new TimeSpan(1, 'd'),
     getSessionAttributes: (attributes: Attributes) => attributes,
+    getUserAttributes: (account: AccountFacts) => account,
   });
   return {
     create: async (userId, device) => {
@@ -63,8 +64,10 @@ export function createSessions(parts: SessionParts): SessionPort {
       return { token, expiresAt: new Date(endsAt) };
     },
     validate: async (token) => {
-      const { session } = await lucia.validateSession(sha256(token));
-      return session === null ? null : withinLimits(parts, session);
+      const { session, user } = await lucia.validateSession(sha256(token));
+      if (session === null) return null;
+      const living = await withinLimits(parts, session, user.roles);
+      return living === null ? null : { ...living, user: { id: user.id, name: user.name, email: user.email } };
     },
     end: (token) => lucia.invalidateSession(sha256(token)),
     endAllOf: (userId) => lucia.invalidateUserSessions(userId),
@@ -72,8 +75,12 @@ export function createSessions(parts: SessionParts): SessionPort {
 }
 
 /** The session where it still stands, its idle limit moved on when more than half of it is used up. */
-async function withinLimits({ db, clock }: SessionParts, session: Attributes & { id: string; userId: string }): Promise<Session | null> {
-  const limits = limitsFor(await rolesOf(db, session.userId));
+async function withinLimits(
+  { db, clock }: SessionParts,
+  session: Attributes & { id: string; userId: string },
+  roles: readonly Role[],
+): Promise<Session | null> {
+  const limits = limitsFor(roles);
   const nowMs = clock.utcMs();
   // A role that was raised since shortens the session, one that was lowered does not lengthen it.
   const endsAt = Math.min(session.endsAt, session.createdAt + limits.absoluteMs);

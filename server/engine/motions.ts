@@ -2,7 +2,9 @@ import type { StepOutcome, StepRow } from '@/shared/archive/run-records';
 import { advanceCursor } from '@/shared/protocol/cursor';
 import { swingMove } from '@/shared/protocol/durations';
 import type { Instant } from '../interfaces/clock';
+import type { MotionSent } from '../interfaces/turntable-link';
 import type { Draft } from './draft';
+import type { RunSnapshot } from './run-context';
 import { forgetPosition, noteHomed } from './position';
 import { endStanding, openSwing, sendMove, standingEndUtcMs, toleranceDeg, writeMark } from './steps';
 import { LATE_MS, MOTION_GRACE_MS } from './timing';
@@ -149,4 +151,13 @@ export function reachedTarget(draft: Draft): boolean {
   if (reached) return true;
   const { angleEndDeg } = draft.step.row;
   return angleEndDeg !== null && targetDeg !== null && Math.abs(angleEndDeg - targetDeg) <= toleranceDeg(draft);
+}
+
+/** What was sent to the controller and has not been told to be over. */
+export function openMotions({ context: { step, ahead } }: Pick<RunSnapshot, 'context'>): MotionSent[] {
+  const motion = step === null || step.broken || step.row.endUtcMs !== null ? null : step.motion;
+  return [
+    ...(motion === null || step === null ? [] : [{ kind: step.row.kind === 'home' ? ('home' as const) : ('move' as const), id: motion.commandId }]),
+    ...(ahead === null ? [] : [{ kind: 'move' as const, id: ahead.commandId }]),
+  ];
 }

@@ -4,6 +4,7 @@ import type { Instant } from '../interfaces/clock';
 import { StaleRunError } from '../interfaces/run-store';
 import type { LinkEvent } from '../interfaces/turntable-link';
 import { chained } from './chained';
+import { openMotions } from './motions';
 import { beginRun, deadlineOf, isArmExpected, isRunOver, isUnderWay, wantsMotion } from './chart';
 import { type Advance, CHART_VERSION, type Effect, type RunEvent, type RunSnapshot } from './run-context';
 import { advanceSafely } from './advance-safely';
@@ -95,7 +96,9 @@ export class RunDriver {
     const { aliveUtcMs = clock.utcMs(), toPerform = [] } = (stored?.snapshot ?? {}) as Partial<StoredSnapshot>;
     for (const effect of toPerform) this.outside(() => this.parts.perform(effect));
     this.enqueue({ event: { type: 'server-restarted', at: this.now(), aliveUtcMs, serverName } });
-    const controller = link.health().condition === 'ready' ? link.controller() : null;
+    const open = openMotions(this.snapshot);
+    link.takeUp(open);
+    const controller = open.length === 0 && link.health().condition === 'ready' ? link.controller() : null;
     if (controller !== null) this.heard({ kind: 'ready', at: this.now(), controller, sameBoot: true });
     this.timers.keepAlive();
   }

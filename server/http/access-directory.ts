@@ -2,9 +2,8 @@ import type { Clock } from '../interfaces/clock';
 import type { Session, SessionPort } from '../interfaces/sessions';
 import type { Membership, SignedIn } from './route-context';
 
-/** Where accounts and memberships are looked up: the database, through `server/store`. */
+/** Where memberships are looked up: the database, through `server/store`. */
 export interface AccessSource {
-  user(userId: string): Promise<{ id: string; name: string; email: string } | null>;
   membership(userId: string, labId: string): Promise<Membership | null>;
   /** Sessions within their absolute life and memberships of everybody in these labs, for the memory copy. */
   ofLabs(labIds: readonly string[]): Promise<{
@@ -42,14 +41,14 @@ export class AccessDirectory {
 
   /** The signed-in account of a cookie token, or null. */
   async signedIn(token: string): Promise<SignedIn | null> {
-    const session = await this.parts.sessions.validate(token);
-    if (session === null) return null;
-    const user = await this.parts.source.user(session.userId);
-    if (user !== null && this.watched.size > 0) {
+    const living = await this.parts.sessions.validate(token);
+    if (living === null) return null;
+    const { user, ...session } = living;
+    if (this.watched.size > 0) {
       this.copy.sessions.set(session.id, session);
       this.copy.users.set(user.id, user);
     }
-    return user === null ? null : { userId: user.id, name: user.name, email: user.email, session, token };
+    return { userId: user.id, name: user.name, email: user.email, session, token };
   }
 
   /** Role of an account in a lab, or null for a stranger. */

@@ -52,6 +52,9 @@ export type LinkCommand =
   /** Decelerate and end the session's motion; drivers released only where the rig is marked safe when free. */
   | { kind: 'stop'; id: string; releaseDrivers: boolean };
 
+/** A motion that was sent and whose end was not told yet. */
+export type MotionSent = Pick<Extract<LinkCommand, { kind: 'home' | 'move' }>, 'kind' | 'id'>;
+
 /** Soft travel limits, caps and home speed as the controller itself keeps them. */
 export interface ControllerLimits {
   leastDeg: number;
@@ -136,6 +139,11 @@ export interface TurntableLink {
   teach(limits: ControllerLimits): Promise<TeachOutcome>;
   /** Sends a command at most once; the outcome comes as events. Hold and stop are repeated until confirmed. */
   send(command: LinkCommand): void;
+  /**
+   * Motions that another process sent and that this one answers for now. What the controller still keeps of them is read again and told under
+   * their ids, with its own stamps; only then is `ready` told, once more where it was told before. Nothing is sent a second time.
+   */
+  takeUp(motions: readonly MotionSent[]): void;
   /** Asked before each heartbeat: may the motion lease be renewed? Answered by the run loop itself. */
   setLeaseRule(mayRenew: () => boolean): void;
   subscribe(listener: (event: LinkEvent) => void): () => void;

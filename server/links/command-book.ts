@@ -1,15 +1,17 @@
 import { hex8, type Order, type Reply } from '@/firmware-protocol/codec';
-import type { LinkCommand } from '../interfaces/turntable-link';
+import type { LinkCommand, MotionSent } from '../interfaces/turntable-link';
 import type { CommandEffect, CommandInput, CommandLife, RequestClass } from './command-life';
 import type { LiveRequest, SentAs } from './wire';
 
 /** A command of the run engine on its way through the controller. */
 export interface Command extends LiveRequest {
-  readonly command: LinkCommand;
+  readonly command: LinkCommand | MotionSent;
   /** SPEC 3.8. */
   readonly tag: string;
   /** While uncertain: once the events up to this number are read, it is clear whether it was accepted; null: not known yet. */
   resolvedBy: number | null;
+  /** Another process sent it. */
+  readonly takenUp: boolean;
 }
 
 export interface CommandBookSetting {
@@ -29,15 +31,41 @@ export class CommandBook {
 
   add(command: LinkCommand): Command {
     const { setting } = this;
+    return this.enter(command, { life: { phase: 'queued' }, takenUp: false, compose: (tag) => setting.compose(command, tag) });
+  }
+
+  /** A motion that another process sent: it is never sent again, and the controller's events tell what became of it. */
+  takeUp(motion: MotionSent): void {
+    const compose = (): never => {
+      throw new Error(`the motion ${motion.id} of another process is not to be sent`);
+    };
+    this.enter(motion, { life: { phase: 'uncertain' }, takenUp: true, compose });
+  }
+
+  get holdsTakenUp(): boolean {
+    return this.commands.some(({ takenUp }) => takenUp);
+  }
+
+  /** The controller is at rest and all that it keeps is read: of what it has not told by now it knows nothing. */
+  dropTakenUp(): void {
+    this.commands = this.commands.filter(({ takenUp }) => !takenUp);
+  }
+
+  private enter(
+    command: Command['command'],
+    { life, takenUp, compose }: Pick<Command, 'life' | 'takenUp'> & { compose(tag: string): Order },
+  ): Command {
+    const { setting } = this;
     const tag = tagOf(command.id);
     const entry: Command = {
       command,
       tag,
       of: command.kind === 'hold' || command.kind === 'stop' ? 'stop' : 'motion',
-      life: { phase: 'queued' },
+      life,
+      takenUp,
       sent: null,
       resolvedBy: null,
-      compose: () => setting.compose(command, tag),
+      compose: () => compose(tag),
       told: (effect, reply) => setting.told(entry, effect, reply),
     };
     this.commands.push(entry);
@@ -90,8 +118,8 @@ export class CommandBook {
 }
 
 /** A time of the host, which means nothing to the controller before its clock is known. */
-export function isTimed(command: LinkCommand): boolean {
-  return command.kind === 'move' && command.startUtcMs !== null;
+export function isTimed(command: Command['command']): boolean {
+  return 'startUtcMs' in command && command.startUtcMs !== null;
 }
 
 /** A command's id, of any form, as an identifier of the protocol (FNV-1a, 32 bit). */

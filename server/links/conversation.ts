@@ -44,6 +44,8 @@ export class Conversation {
   /** Events count from the first status of a boot on; what comes before belongs to somebody else. */
   private following = false;
   private announced = false;
+  /** Of the events up to this number, which happened before anybody here listened, only those of own commands are told. */
+  private listeningFrom = 0;
   /** Boot identifier when the link was last ready. */
   private bootBefore: string | null = null;
   private lastEventUs = 0;
@@ -61,6 +63,16 @@ export class Conversation {
   /** The session is over: a new one on the same line. */
   private greet(): void {
     this.phase = 'hello';
+  }
+
+  /** Commands of another process were taken up: before the link is ready, all is read again that the controller still keeps of them (SPEC 7.4). */
+  readFromOldest(): void {
+    if (!this.following) return;
+    this.events.startAfter(0);
+    this.events.heardOf(this.setting.report.upTo.event);
+    this.lastEventUs = 0;
+    this.rereadUpTo = 0;
+    this.announced = false;
   }
 
   hearEvent(event: EventMessage): void {
@@ -181,6 +193,7 @@ export class Conversation {
     this.lastEventUs = 0;
     this.following = false;
     this.announced = false;
+    this.listeningFrom = 0;
     if (before === null) return;
     // The events of the new start are all of interest, those before the first greeting ever are not.
     this.events.startAfter(0);
@@ -213,7 +226,10 @@ export class Conversation {
   }
 
   private heardFirstStatus(reply: Reply, body: OkBody): void {
-    if (!this.following) this.events.startAfter(body.event);
+    if (!this.following) {
+      this.listeningFrom = body.event;
+      this.events.startAfter(this.setting.book.holdsTakenUp ? 0 : body.event);
+    }
     this.following = true;
     this.setting.report.takeReply(reply, body);
     this.events.heardOf(body.event);
@@ -252,13 +268,14 @@ export class Conversation {
     const { report, book, telling, lease } = this.setting;
     for (const event of events) {
       const { what } = event;
+      const isPast = event.number <= this.listeningFrom;
       this.event = event;
       this.lastEventUs = event.atUs;
       report.takeEvent(event);
-      if (what.word === 'interlock' || what.word === 'lease') lease.end();
+      if (!isPast && (what.word === 'interlock' || what.word === 'lease')) lease.end();
       const entry = what.word === 'began' || what.word === 'ended' ? book.byTag(what.tag) : undefined;
       if (entry !== undefined) this.input(entry, { kind: what.word === 'began' ? 'began' : 'ended' });
-      telling.happening(event);
+      if (!isPast) telling.happening(event);
       this.event = null;
     }
     this.settle();
@@ -271,7 +288,10 @@ export class Conversation {
     book.resolved(hasGivenOn, (entry, input) => this.input(entry, input));
     // A stop is answered before the greeting of a fresh line tells whether the controller restarted: its standstill waits for that.
     if (!this.following || !report.known || this.phase !== 'talking') return;
-    if (report.atRest && hasGivenOn(report.upTo.event)) book.each((entry) => this.input(entry, { kind: 'standstill' }));
+    if (report.atRest && hasGivenOn(report.upTo.event)) {
+      book.each((entry) => this.input(entry, { kind: 'standstill' }));
+      book.dropTakenUp();
+    }
     if (this.announced || this.events.missing !== null) return;
     const sameBoot = this.bootBefore === this.hi?.boot;
     this.announced = true;

@@ -8,6 +8,7 @@ import type {
   LinkCommand,
   LinkEvent,
   LinkHealth,
+  MotionSent,
   TeachOutcome,
   TurntableLink,
 } from '../interfaces/turntable-link';
@@ -170,6 +171,14 @@ class LinkDriver implements TurntableLink {
       if (this.book.length >= MOST_COMMANDS) return this.telling.refused(command.id, 'busy', 'too many orders wait for the controller');
       this.lease.wanted();
       this.book.add(command);
+    });
+  }
+
+  takeUp(motions: readonly MotionSent[]): void {
+    if (motions.length === 0) return;
+    this.act(() => {
+      for (const motion of motions) this.book.takeUp(motion);
+      this.talk.readFromOldest();
     });
   }
 

@@ -127,10 +127,9 @@ export async function changeMember(tx: Transaction, change: { labId: string; use
   return 'done';
 }
 
-/** Accounts, memberships and living sessions, for who asks on each request and for the memory copy of labs with a run. */
+/** Memberships, for each request, and with them the living sessions and accounts, for the memory copy of labs with a run. */
 export function accessSource(db: Database, nowUtcMs: () => number) {
   return {
-    user: (userId: string) => userById(db, userId),
     membership: (userId: string, labId: string) => membershipIn(db, userId, labId),
     ofLabs: async (labIds: readonly string[]) => {
       const found = await db

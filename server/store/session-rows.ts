@@ -1,5 +1,6 @@
 import { DrizzlePostgreSQLAdapter } from '@lucia-auth/adapter-drizzle';
-import { eq, lte } from 'drizzle-orm';
+import { eq, lte, sql } from 'drizzle-orm';
+import type { DatabaseSession, DatabaseUser } from 'lucia';
 import { memberships, sessions, users } from '@/db/schema';
 import type { Role } from '@/shared/contracts/roles';
 import type { Database } from './database';
@@ -14,8 +15,44 @@ export interface SessionFacts {
   ip: string;
 }
 
-/** Lucia's view of the session and account tables. */
-export const sessionAdapter = (db: Database) => new DrizzlePostgreSQLAdapter(db, sessions, users);
+/** What is known of an account on each request. */
+export interface AccountFacts {
+  name: string;
+  email: string;
+  /** Its roles anywhere. */
+  roles: Role[];
+}
+
+declare module 'lucia' {
+  interface Register {
+    DatabaseUserAttributes: AccountFacts;
+  }
+}
+
+/** Lucia's view of the session and account tables. Every request asks for both and for the roles: all in one query. */
+class SessionAdapter extends DrizzlePostgreSQLAdapter {
+  constructor(private readonly handle: Database) {
+    super(handle, sessions, users);
+  }
+
+  override async getSessionAndUser(sessionId: string): Promise<[DatabaseSession | null, DatabaseUser | null]> {
+    const roles = sql<Role[]>`array(select distinct ${memberships.role} from ${memberships} where ${memberships.userId} = ${users.id})`;
+    const [row] = await this.handle
+      .select({ session: sessions, name: users.name, email: users.email, roles })
+      .from(sessions)
+      .innerJoin(users, eq(sessions.userId, users.id))
+      .where(eq(sessions.id, sessionId));
+    if (row === undefined) return [null, null];
+    const { id, userId, expiresAt, ...attributes } = row.session;
+    const { session: _session, ...account } = row;
+    return [
+      { id, userId, expiresAt, attributes: attributes as DatabaseSession['attributes'] },
+      { id: userId, attributes: account },
+    ];
+  }
+}
+
+export const sessionAdapter = (db: Database) => new SessionAdapter(db);
 
 /** The roles an account has anywhere. */
 export async function rolesOf(db: Database, userId: string): Promise<Role[]> {

@@ -102,6 +102,8 @@ describe('what happens at the rig while no server runs', () => {
     await night.pass(400);
     expect(night.driver().facts().state).toBe('finished');
     expect(night.voided).toEqual([]);
+    // What the controller's ring kept of the motion that was under way was read again: no edge had to be guessed.
+    expect(night.store.events.filter(({ kind }) => kind === 'edge-not-told')).toEqual([]);
   });
 
   test.each(moments)('the door was opened and closed again, from %s s on: held, with the arm void, and nothing moves', async (seconds) => {

@@ -6,6 +6,7 @@ import type {
   LinkEvent,
   LinkHealth,
   MotionEndCause,
+  MotionSent,
   TeachOutcome,
   TurntableLink,
 } from '@/server/interfaces/turntable-link';
@@ -44,6 +45,8 @@ export class FakeLink implements TurntableLink {
   private readonly listeners = new Set<(event: LinkEvent) => void>();
   private readonly unsaid: LinkEvent[] = [];
   private readonly unconfirmed: string[] = [];
+  /** What happened to commands, as the controller's ring keeps it. */
+  private readonly ring: Extract<LinkEvent, { commandId: string }>[] = [];
 
   constructor(private readonly clock: Clock) {}
 
@@ -102,6 +105,15 @@ export class FakeLink implements TurntableLink {
 
   setLeaseRule(mayRenew: () => boolean): void {
     this.mayRenew = mayRenew;
+  }
+
+  takeUp(motions: readonly MotionSent[]): void {
+    if (motions.length === 0 || !this.up) return;
+    const ids = new Set(motions.map(({ id }) => id));
+    this.clock.after(5, () => {
+      for (const event of this.ring) if (ids.has(event.commandId)) this.tell(event);
+      this.tell({ kind: 'ready', at: this.at(), controller: this.controller(), sameBoot: true });
+    });
   }
 
   subscribe(listener: (event: LinkEvent) => void): () => void {
@@ -272,6 +284,7 @@ export class FakeLink implements TurntableLink {
   }
 
   private say(event: LinkEvent): void {
+    if ('commandId' in event && event.kind !== 'standstill') this.ring.push(event);
     if (this.up) this.tell(event);
     else this.unsaid.push(event);
   }

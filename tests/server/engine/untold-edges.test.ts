@@ -53,9 +53,25 @@ test('a beginning that is lost for good is not passed off as measured when the e
   expect(row).toMatchObject({ outcome: 'done', uEndS: MEASURED_U_S });
 });
 
-test('a beginning that nobody heard because the server was away has an uncertainty as long as it was away', async () => {
+test('edges that passed while the server was away are read again from the ring, with the controller’s own stamps', async () => {
   const bench = await beforeSwing(1, { ...toTheMiddle, onInterruption: 'resume' });
   await bench.restart(8);
+  await bench.pass(300);
+  expect(bench.driver.facts().state).toBe('finished');
+  const [, row] = swings(bench);
+  const leaseLapsedUtcMs = row?.endUtcMs ?? NaN;
+  expect(row).toMatchObject({ outcome: 'cut short', startUtcMs: began(bench, 2), uStartS: MEASURED_U_S, uEndS: MEASURED_U_S });
+  expect(leaseLapsedUtcMs - began(bench, 2)).toBeGreaterThan(0);
+  expect(leaseLapsedUtcMs - began(bench, 2)).toBeLessThan(2_000);
+  expect(notTold(bench)).toEqual([]);
+});
+
+test('a beginning that nobody heard, and that has left the ring, has an uncertainty as long as the server was away', async () => {
+  const bench = await beforeSwing(1, { ...toTheMiddle, onInterruption: 'resume' });
+  bench.link.loses = ['motion-began', 'motion-ended'];
+  await bench.restart(8);
+  await bench.pass(1);
+  bench.link.loses = [];
   await bench.pass(300);
   expect(bench.driver.facts().state).toBe('finished');
   const [, row] = swings(bench);

@@ -280,6 +280,72 @@ describe('a broken line', () => {
   });
 });
 
+describe('motions of another process', () => {
+  async function takenUp(motion: LinkCommand, { before, away }: { before: number; away: number }) {
+    const made = await ready();
+    made.link.send(motion);
+    await made.clock.advance(before);
+    await made.link.close();
+    await made.clock.advance(away);
+    const link = createLink({ factory: made.controller.factory, clock: made.clock, rig: benchRig, epoch: 6 });
+    const told: LinkEvent[] = [];
+    link.subscribe((event) => told.push(event));
+    link.setLeaseRule(() => true);
+    return { ...made, link, told, first: made.told };
+  }
+
+  test('are told with the stamps that the controller kept, then ready, and nothing else of the past', async () => {
+    const { clock, link, told, first } = await takenUp(move('a', 150), { before: 500, away: 20_000 });
+    link.takeUp([{ kind: 'move', id: 'a' }]);
+    link.open();
+    await clock.advance(2_000);
+    expect(told.map(({ kind }) => kind)).toEqual(['accepted', 'motion-began', 'motion-ended', 'ready']);
+    const began = last(told, 'motion-began');
+    // The clock is known anew, and its rate to 100 ppm only: over 20 s its uncertainty is 2 ms.
+    expect(Math.abs((began?.at.utcMs ?? NaN) - (last(first, 'motion-began')?.at.utcMs ?? NaN))).toBeLessThan(5);
+    expect(began?.at.uS).toBeGreaterThan(0.001);
+    expect(last(told, 'motion-ended')).toMatchObject({ commandId: 'a', cause: 'lease' });
+    await link.close();
+  });
+
+  test('are told on a line that was ready before, too, and ready is told once more', async () => {
+    const { clock, link, told } = await takenUp(move('a', 10), { before: 1_500, away: 5_000 });
+    link.open();
+    await clock.advance(1_000);
+    expect(told.map(({ kind }) => kind)).toEqual(['ready']);
+    link.takeUp([{ kind: 'move', id: 'a' }]);
+    await clock.advance(1_000);
+    expect(told.map(({ kind }) => kind)).toEqual(['ready', 'accepted', 'motion-began', 'motion-ended', 'ready']);
+    expect(last(told, 'motion-ended')).toMatchObject({ cause: 'done', angleDeg: 10 });
+    await link.close();
+  });
+
+  test('of which the controller keeps nothing are let go: it may have restarted', async () => {
+    const { clock, link, told, controller } = await takenUp(move('a', 150), { before: 500, away: 100 });
+    controller.reset();
+    await clock.advance(3_000);
+    link.takeUp([{ kind: 'move', id: 'a' }]);
+    link.open();
+    await clock.advance(3_000);
+    expect(told.map(({ kind }) => kind)).toEqual(['ready']);
+    link.send({ kind: 'home', id: 'b' });
+    await clock.advance(30_000);
+    expect(told.filter((event) => 'commandId' in event && event.commandId === 'a')).toEqual([]);
+    expect(last(told, 'motion-began')).toMatchObject({ commandId: 'b' });
+    await link.close();
+  });
+
+  test('that happened before the last 32 events are let go too', async () => {
+    const { clock, link, told, controller } = await takenUp(move('a', 10), { before: 1_500, away: 100 });
+    for (let turn = 0; turn < 40; turn += 1) controller.turnArmKey(turn % 2 === 1);
+    link.takeUp([{ kind: 'move', id: 'a' }]);
+    link.open();
+    await clock.advance(3_000);
+    expect(told.map(({ kind }) => kind)).toEqual(['ready']);
+    await link.close();
+  });
+});
+
 describe('the end', () => {
   test('a closed link says nothing more and leaves nothing behind', async () => {
     const { clock, link, orders, controller, told } = await ready();
