@@ -8,7 +8,11 @@ const node = {
   transform: {
     '\\.[jt]sx?$': [
       'babel-jest',
-      { configFile: false, presets: ['@babel/preset-typescript'], plugins: ['@babel/plugin-transform-modules-commonjs'] },
+      {
+        configFile: false,
+        presets: ['@babel/preset-typescript'],
+        plugins: ['./tests/support/own-globals.cjs', '@babel/plugin-transform-modules-commonjs'],
+      },
     ],
   },
   transformIgnorePatterns: untransformed,

@@ -21,7 +21,7 @@ if (strange.length > 0) giveUp(`no benchmark called ${strange.join(', ')}; there
 
 const chosen = wanted.length > 0 ? wanted : known;
 await ensureNodeModules();
-await ensureDebianPackages(['postgresql', ...(chosen.includes('web') ? ['chromium'] : [])]);
+await ensureDebianPackages(['postgresql', ...(chosen.includes('web') ? ['chromium-headless-shell'] : [])]);
 if (chosen.includes('web')) await ensureWebBuild();
 const cluster = await startCluster('bench');
 const env = { ...process.env, EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres') };

@@ -16,7 +16,7 @@ const whole = args.length === 0;
 const inRealTime = /tests\/(e2e|contract\/link)\//;
 const start = Date.now();
 await ensureNodeModules();
-await ensureDebianPackages(['postgresql', 'chromium', 'socat', 'ser2net', 'g++', 'gcc-avr', 'avr-libc']);
+await ensureDebianPackages(['postgresql', 'chromium-headless-shell', 'socat', 'ser2net', 'g++', 'gcc-avr', 'avr-libc']);
 const output = join(root, 'test-output');
 mkdirSync(output, { recursive: true });
 

@@ -3,7 +3,8 @@ import { useState } from 'react';
 import { fieldErrors, useLabMutation, useMay, wordsOf } from '@/components/api';
 import { HealthPanel, InputsPanel } from '@/components/link/line-panels';
 import { useLiveLine } from '@/components/link/use-live-line';
-import { Body, Button, Icon, Loading, Panel, ProblemNotice, Screen, Section, useToast } from '@/components/ui';
+import { Body, Button, Check, Heading, Icon, Loading, Panel, ProblemNotice, Screen, Section, useToast } from '@/components/ui';
+import { takeController } from '@/shared/contracts/link';
 import { changeLink, tryLink, type LinkSettings, type RigView } from '@/shared/contracts/rigs';
 import { LinkForm } from './link-form';
 import { linkName } from './link-words';
@@ -44,11 +45,50 @@ function LinkPage({ rig, etag }: { rig: RigView; etag: string | undefined }) {
         </>
       }
     >
+      {line?.health.keptOutBy == null ? null : <KeptOut rig={rig} keptOutBy={line.health.keptOutBy} />}
       <FirstMoveEntry rig={rig} />
       <Section title="Line to the controller">
         <LinkChoice rig={rig} etag={etag} />
       </Section>
     </Screen>
+  );
+}
+
+/** The controller obeys another server: whoever knows that this one is gone takes it over. */
+function KeptOut({ rig, keptOutBy }: { rig: RigView; keptOutBy: number }) {
+  const mayEdit = useMay('rig.edit');
+  const [sure, setSure] = useState(false);
+  const take = useLabMutation(takeController);
+  return (
+    <Panel className="gap-3" edge="danger" testID="kept-out">
+      <Heading level={2}>This controller obeys another server</Heading>
+      <Body>
+        It was last driven under number {keptOutBy} and refuses everything below. If that server still runs, let it have the rig: two
+        servers on one rig would take it from each other. If it is gone (a database set up anew or put back, a board from another lab), take
+        the controller over; its limits and its position are kept.
+      </Body>
+      {mayEdit.ok ? (
+        <Check
+          label="The other server is gone, or no longer has to do with this rig"
+          value={sure}
+          onChange={setSure}
+          testID="other-is-gone"
+        />
+      ) : (
+        <Body tone="dim">{mayEdit.why}</Body>
+      )}
+      {take.error === null ? null : <ProblemNotice title="The controller was not taken over" {...wordsOf(take.error)} />}
+      {mayEdit.ok ? (
+        <Button
+          label="Take the controller over"
+          className="self-start"
+          disabled={!sure}
+          busy={take.isPending}
+          onPress={() => take.mutate({ params: { rigId: rig.id }, body: { keptOutBy } })}
+          testID="take-controller"
+        />
+      ) : null}
+    </Panel>
   );
 }
 

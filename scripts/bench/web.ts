@@ -26,7 +26,7 @@ const quiet = ['--disable-background-networking', '--disable-component-update', 
 
 const openPhone = (profile: string): Promise<BrowserContext> =>
   chromium.launchPersistentContext(profile, {
-    executablePath: '/usr/bin/chromium',
+    executablePath: '/usr/bin/chromium-headless-shell',
     headless: true,
     args: ['--no-sandbox', '--disable-gpu', '--disable-quic', ...quiet],
     viewport: { width: 390, height: 844 },

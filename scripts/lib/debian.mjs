@@ -40,7 +40,7 @@ function onDisk(path) {
 
 const present = {
   postgresql: () => findPostgres() !== null && onPath('psql'),
-  chromium: () => onPath('chromium'),
+  'chromium-headless-shell': () => onPath('chromium-headless-shell'),
   socat: () => onPath('socat'),
   'g++': () => onPath('g++'),
   'gcc-avr': () => onPath('avr-g++'),

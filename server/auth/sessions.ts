@@ -12,8 +12,9 @@ interface Attributes extends SessionFacts {
 
 declare module 'lucia' {
   interface Register {
-    Lucia: Lucia<Attributes>;
+    Lucia: Lucia<Attributes, AccountFacts>;
     DatabaseSessionAttributes: Attributes;
+    DatabaseUserAttributes: AccountFacts;
   }
 }
 

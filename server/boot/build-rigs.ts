@@ -66,13 +66,10 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     guided: () => guided,
   });
   const leases = new LeaseKeeper({
-    database,
-    clock,
-    log,
+    ...{ database, clock, log, onTaken },
     holder: randomUUID(),
     leaseMs: Math.max(shortestLeaseMs, overrides.paceMs ?? 0),
     graceMs: DATABASE_GRACE_MS,
-    onTaken,
     onLost: letGo,
     onDatabase: (sinceUtcMs) => {
       supervisor.noteDatabase(sinceUtcMs);
@@ -84,6 +81,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     ...{ database, samples, clock, log },
     paceMs: overrides.paceMs ?? 0,
     epochOf: (rig) => leases.epochOf(rig),
+    raiseEpoch: (rig, above) => leases.raise(rig, above),
     apparatusOf: (rig) => apparatus.of(rig),
     onLinkEvent: (station, event) => heed(station, event),
   });

@@ -34,6 +34,10 @@ class Watched implements JobQueue {
     return this.queue.fail(job, why).finally(() => this.done());
   }
 
+  giveBack(job: Job): Promise<void> {
+    return this.queue.giveBack(job).finally(() => this.done());
+  }
+
   idle(): Promise<void> {
     return this.busy === 0 ? Promise.resolve() : new Promise((resolve) => this.waiting.push(resolve));
   }

@@ -1,7 +1,7 @@
 import type { Logger } from 'pino';
 import type { Cancel, Clock } from '../interfaces/clock';
 import type { Connection } from '../store/database';
-import { freeRigs, giveRigLeases, renewRigLeases, takeRigLease } from '../store/rig-leases';
+import { freeRigs, giveRigLeases, raiseRigEpoch, renewRigLeases, takeRigLease } from '../store/rig-leases';
 
 export interface RigKey {
   labId: string;
@@ -53,6 +53,15 @@ export class LeaseKeeper {
   /** Whether this process drives the rig. */
   holds(rigId: string): boolean {
     return this.epochs.has(rigId);
+  }
+
+  /** Lifts this process's epoch of a rig above one that its controller has met elsewhere; null where it does not drive the rig. */
+  async raise({ labId, rigId }: RigKey, above: number): Promise<number | null> {
+    if (!this.epochs.has(rigId)) return null;
+    const { database, holder } = this.parts;
+    const epoch = await raiseRigEpoch(database.db, { labId, rigId, holder, above });
+    if (epoch !== null) this.epochs.set(rigId, { labId, rigId, epoch });
+    return epoch;
   }
 
   renewRegularly(): void {

@@ -26,6 +26,8 @@ export interface StationsParts {
   paceMs: number;
   /** The epoch under which this process drives a rig; null while another process holds its lease. */
   epochOf(rig: { labId: string; rigId: string }): Promise<number | null>;
+  /** Lifts that epoch above another one; null while another process holds the lease. */
+  raiseEpoch(rig: { labId: string; rigId: string }, above: number): Promise<number | null>;
   /** The turntable and pendulum of a simulated rig; the same for as long as the rig exists. */
   apparatusOf(rig: StationRig): SimulatedApparatus;
   /** What the controller of a rig says, whether or not a run listens. */
@@ -76,6 +78,12 @@ export class ServerRigStations implements RigStations {
     if (apparatus === null) this.apparatus.delete(rig.id);
     else this.apparatus.set(rig.id, apparatus);
     link.open();
+  }
+
+  async takeController(rig: { labId: string; rigId: string }, above: number): Promise<number | null> {
+    const epoch = await this.parts.raiseEpoch(rig, above);
+    if (epoch !== null) this.stations.get(rig.rigId)?.link.raiseEpoch(epoch);
+    return epoch;
   }
 
   /** Another mass set lies on the turntable of a simulated rig from now on. */

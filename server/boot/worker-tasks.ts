@@ -1,5 +1,6 @@
 import { join } from 'node:path';
 import { Worker } from 'node:worker_threads';
+import { CutShort } from '../interfaces/jobs';
 import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { WorkerAnswer, WorkerCall } from './worker-thread';
 
@@ -19,7 +20,7 @@ class Lane {
   private closed = false;
 
   call(task: WorkerCall['task'], args: unknown[]): Promise<unknown> {
-    if (this.closed) return Promise.reject(new Error('the server is ending'));
+    if (this.closed) return Promise.reject(new CutShort());
     const worker = (this.worker ??= this.begin());
     const id = (this.count += 1);
     return new Promise((resolve, reject) => {
@@ -38,7 +39,9 @@ class Lane {
     worker.unref();
     worker.on('message', (answer: WorkerAnswer) => this.answered(answer));
     worker.on('error', (error: Error) => this.broken(worker, error));
-    worker.on('exit', () => this.broken(worker, new Error('the worker thread ended before it had answered')));
+    worker.on('exit', () =>
+      this.broken(worker, this.closed ? new CutShort() : new Error('the worker thread ended before it had answered')),
+    );
     return worker;
   }
 

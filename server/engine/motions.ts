@@ -157,7 +157,9 @@ export function reachedTarget(draft: Draft): boolean {
 export function openMotions({ context: { step, ahead } }: Pick<RunSnapshot, 'context'>): MotionSent[] {
   const motion = step === null || step.broken || step.row.endUtcMs !== null ? null : step.motion;
   return [
-    ...(motion === null || step === null ? [] : [{ kind: step.row.kind === 'home' ? ('home' as const) : ('move' as const), id: motion.commandId }]),
+    ...(motion === null || step === null
+      ? []
+      : [{ kind: step.row.kind === 'home' ? ('home' as const) : ('move' as const), id: motion.commandId }]),
     ...(ahead === null ? [] : [{ kind: 'move' as const, id: ahead.commandId }]),
   ];
 }

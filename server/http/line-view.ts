@@ -23,6 +23,7 @@ const healthOf = (health: LinkHealth): LinkHealthView => ({
   clock: health.clockOffsetMs === null || health.clockUS === null ? null : { offsetMs: health.clockOffsetMs, uMs: health.clockUS * 1000 },
   drift: health.driftPpm === null || health.driftUPpm === null ? null : { ppm: health.driftPpm, uPpm: health.driftUPpm },
   protocol: health.protocol,
+  keptOutBy: health.higherEpoch,
 });
 
 export const limitsViewOf = (limits: ControllerLimits): MotionLimits => ({

@@ -18,6 +18,15 @@ export interface JobQueue {
   finish(job: Job): Promise<void>;
   /** Puts the job back for a later attempt, or gives it up after the last one. */
   fail(job: Job, why: string): Promise<void>;
+  /** Puts the job back at once, as if this attempt had not been: it was cut short by the end of the process. */
+  giveBack(job: Job): Promise<void>;
+}
+
+/** The process ends before the work does; the work is not at fault. */
+export class CutShort extends Error {
+  constructor() {
+    super('the server is ending');
+  }
 }
 
 /** Does the work of one kind of job; a rejection puts the job back or gives it up. */

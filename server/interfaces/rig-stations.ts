@@ -41,6 +41,11 @@ export interface RigStations {
   get(rigId: string): RigStation | null;
   /** Opens a rig's line, or opens it anew after its settings or its document changed; no run may be on it. */
   put(rig: StationRig): Promise<void>;
+  /**
+   * Takes a controller that obeys another server's number (SPEC 3.3) from it: this process's own number goes above it for good.
+   * @returns the new number, or null where this process does not drive the rig
+   */
+  takeController(rig: { labId: string; rigId: string }, above: number): Promise<number | null>;
   /** Another mass set lies on the turntable from now on: only the simulated rig has to be told. */
   loadMasses(rigId: string, document: RigDocument): void;
   /** Serial ports of this computer, to choose from. */

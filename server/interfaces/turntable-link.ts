@@ -144,6 +144,8 @@ export interface TurntableLink {
    * their ids, with its own stamps; only then is `ready` told, once more where it was told before. Nothing is sent a second time.
    */
   takeUp(motions: readonly MotionSent[]): void;
+  /** Greets the controller under a higher epoch from now on: one that another driver's epoch keeps from this one listens again. */
+  raiseEpoch(epoch: number): void;
   /** Asked before each heartbeat: may the motion lease be renewed? Answered by the run loop itself. */
   setLeaseRule(mayRenew: () => boolean): void;
   subscribe(listener: (event: LinkEvent) => void): () => void;

@@ -182,6 +182,10 @@ class LinkDriver implements TurntableLink {
     });
   }
 
+  raiseEpoch(epoch: number): void {
+    this.wire.epoch = Math.max(this.wire.epoch, epoch);
+  }
+
   /** Everything that comes from outside runs through here: then what can be sent is sent, and what is to be told is told. */
   private act(deed: () => void): void {
     deed();

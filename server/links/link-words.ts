@@ -58,7 +58,7 @@ export function versionRefusal({ major, minor, firmware }: HiBody): string | nul
 }
 
 export function epochRefusal(detail: number): string {
-  return `Another server drives this controller (its epoch is ${detail}). Only one may: end the other one, or let it have the rig.`;
+  return `Another server has driven this controller (under number ${detail}), and it obeys only that one. Let it have the rig, or take the controller over.`;
 }
 
 export function silence(description: string, droppedLines: number, heardAny: boolean): string {

@@ -42,7 +42,8 @@ export class Wire {
 
   constructor(
     private readonly clock: Clock,
-    private readonly epoch: number,
+    /** Number of this driver's rig lease (SPEC 3.3); greater from the next greeting on when the lease was taken anew. */
+    public epoch: number,
     /** After a repetition time has brought something new (a request was given up). */
     private readonly freed: () => void,
   ) {}

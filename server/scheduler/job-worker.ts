@@ -1,5 +1,5 @@
 import type { Cancel, Clock } from '../interfaces/clock';
-import type { Job, JobHandlers, JobQueue } from '../interfaces/jobs';
+import { CutShort, type Job, type JobHandlers, type JobQueue } from '../interfaces/jobs';
 
 /** A third of the lease, so that two renewals may be late before it lapses. */
 const renewEveryMs = 10_000;
@@ -68,9 +68,9 @@ async function workOnce({ queue, clock, handlers, onProblem }: JobWorkerParts): 
     onProblem({ job, error });
     if (job === null) return false;
     const failed = job;
-    await queue
-      .fail(failed, error instanceof Error ? error.message : String(error))
-      .catch((failure: unknown) => onProblem({ job: failed, error: failure }));
+    const put =
+      error instanceof CutShort ? queue.giveBack(failed) : queue.fail(failed, error instanceof Error ? error.message : String(error));
+    await put.catch((failure: unknown) => onProblem({ job: failed, error: failure }));
     return true;
   }
 }

@@ -74,6 +74,12 @@ export function createJobQueue(db: Database, holder: string, nowUtcMs: () => num
         .set({ ...next, leaseUntil: null, lastError: why.slice(0, 2000) })
         .where(held(job));
     },
+    giveBack: async (job) => {
+      await db
+        .update(jobs)
+        .set({ state: 'waiting', attempts: job.attempt - 1, dueAt: nowUtcMs(), leaseUntil: null })
+        .where(held(job));
+    },
   };
 }
 

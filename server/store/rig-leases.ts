@@ -25,6 +25,23 @@ export async function takeRigLease(
   return rows[0]?.epoch ?? null;
 }
 
+/**
+ * Lifts the epoch of a lease above one that a controller has met elsewhere.
+ * @returns the new epoch, or null where the lease is not the holder's any more
+ */
+export async function raiseRigEpoch(
+  db: Handle,
+  lease: { labId: string; rigId: string; holder: string; above: number },
+): Promise<number | null> {
+  const { labId, rigId, holder, above } = lease;
+  const rows = await db
+    .update(rigLeases)
+    .set({ epoch: sql`greatest(${rigLeases.epoch}, ${above}) + 1` })
+    .where(and(eq(rigLeases.labId, labId), eq(rigLeases.rigId, rigId), eq(rigLeases.holder, holder)))
+    .returning({ epoch: rigLeases.epoch });
+  return rows[0]?.epoch ?? null;
+}
+
 /** Renews all leases of a holder at once. Returns the rigs that are still its own. */
 export async function renewRigLeases(db: Handle, lease: { holder: string; untilUtcMs: number }): Promise<ReadonlySet<string>> {
   const rows = await db

@@ -23,12 +23,6 @@ export interface AccountFacts {
   roles: Role[];
 }
 
-declare module 'lucia' {
-  interface Register {
-    DatabaseUserAttributes: AccountFacts;
-  }
-}
-
 /** Lucia's view of the session and account tables. Every request asks for both and for the roles: all in one query. */
 class SessionAdapter extends DrizzlePostgreSQLAdapter {
   constructor(private readonly handle: Database) {
@@ -44,7 +38,7 @@ class SessionAdapter extends DrizzlePostgreSQLAdapter {
       .where(eq(sessions.id, sessionId));
     if (row === undefined) return [null, null];
     const { id, userId, expiresAt, ...attributes } = row.session;
-    const { session: _session, ...account } = row;
+    const account: AccountFacts = { name: row.name, email: row.email, roles: row.roles };
     return [
       { id, userId, expiresAt, attributes: attributes as DatabaseSession['attributes'] },
       { id: userId, attributes: account },

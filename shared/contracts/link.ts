@@ -37,6 +37,8 @@ export const linkHealthSchema = z.strictObject({
   drift: z.strictObject({ ppm: z.number(), uPpm: z.number() }).nullable(),
   /** Version of the line protocol that the controller speaks. */
   protocol: z.string().nullable(),
+  /** Number under which another server has driven the controller, which keeps this one out; null: none does. */
+  keptOutBy: z.number().int().nullable(),
 });
 export type LinkHealthView = z.infer<typeof linkHealthSchema>;
 
@@ -159,6 +161,19 @@ export const listSerialPorts = defineRoute({
   status: 200,
   response: z.strictObject({ items: z.array(serialPortSchema) }),
   problems: ['not-found'],
+});
+export const takeController = defineRoute({
+  name: 'takeController',
+  summary: 'Take a controller over that obeys another server: for good, and only where that one is gone',
+  method: 'POST',
+  path: `${rigPath}/line/take-over`,
+  access: 'rig.edit',
+  status: 202,
+  idempotent: true,
+  /** The other server's number as the page shows it. */
+  body: z.strictObject({ keptOutBy: z.number().int() }),
+  response: z.strictObject({ number: z.number().int() }),
+  problems: ['invalid-input', 'not-found', 'not-possible-now', 'key-reused', 'still-running'],
 });
 export const beginGuided = defineRoute({
   name: 'beginGuided',

@@ -21,6 +21,8 @@ export interface Analysis {
   /** Samples found in each window. */
   samplesOf: Map<DwellWindow, number>;
   segments: Segment[];
+  /** Where the fit was begun; null where the data suggest nothing. */
+  start: RingDownStart | null;
   scale: ChannelScale;
   /** Null without a segment. */
   found: DwellFit | null;
@@ -48,7 +50,8 @@ export function analyse(archive: Archive, plan: EvaluationPlan): Analysis {
   const near = wayOffS === 0 ? first : analyseAt(archive, plan, { series, offsetS: wayOffS, judge: false });
   const foundS = wayOffS + (fineOffset({ archive, ...near })?.value ?? 0);
   const offsetS = Math.abs(foundS) > guardedS ? foundS : 0;
-  const last = analyseAt(archive, plan, { series, offsetS, judge: true });
+  const isSame = offsetS === (near === first ? 0 : wayOffS);
+  const last = analyseAt(archive, plan, { series, offsetS, judge: true, ...(isSame ? { start: near.start } : {}) });
   const fine = fineOffset({ archive, ...last });
   return { ...last, clockOffset: fine === null ? null : { value: offsetS + fine.value, u: fine.u } };
 }
@@ -66,7 +69,7 @@ const omegaOf = ({ value, u, nu }: Known): Known => ({ value: (2 * Math.PI) / va
 function analyseAt(
   archive: Archive,
   plan: EvaluationPlan,
-  { series, offsetS, judge }: { series: ArchivedSeries; offsetS: number; judge: boolean },
+  { series, offsetS, judge, start: found }: { series: ArchivedSeries; offsetS: number; judge: boolean; start?: RingDownStart | null },
 ): Omit<Analysis, 'clockOffset'> {
   const scale = scaleOf(series.info, archive.rig);
   const measured = measuredOscillator(archive.rig);
@@ -76,16 +79,17 @@ function analyseAt(
   const samplesOf = new Map(samples.map((one) => [one.window, one.tS.length]));
   const usable = samples.filter(({ window }) => window.why === null);
   const rough = withZero(scale, zeroFrom(usable, scale));
-  const start = startOf(usable, rough, measured);
+  const data = toStartFrom(usable, rough);
+  const start = found === undefined ? startOf(data, measured) : found;
   refuseShort(usable, start === null ? null : (2 * Math.PI) / start.omega);
   const fitted = usable.filter(({ window }) => window.why === null);
   const whole = iterate({ archive, plan, measured, start, samples: fitted, judge }, rough);
-  if (plan.method !== 'acceleration') return { windows, samplesOf, measured, ...whole };
+  if (plan.method !== 'acceleration') return { windows, samplesOf, measured, start, ...whole };
   // The first motion after each swing, by the full step response of a pendulum that the whole dwells tell.
   const begun = fitted.map((one) => beginningOf(one, accelerationPeriods * whole.free.period.value));
   const held: MeasuredOscillator = { omega: omegaOf(whole.free.period), gamma: whole.free.gamma };
   const early = iterate({ archive, plan, measured: held, start: null, samples: begun, judge }, rough);
-  return { windows, samplesOf, measured: held, ...early };
+  return { windows, samplesOf, measured: held, start, ...early };
 }
 
 /** First guess of a spot scale's zero, m: midway between the mean readings of near and far. */
@@ -104,8 +108,8 @@ function zeroFrom(samples: readonly DwellSamples[], scale: ChannelScale): number
   return reading * scale.metresPerUnit;
 }
 
-/** Start of the fit; also marks the windows whose samples are too few. */
-function startOf(samples: readonly DwellSamples[], scale: ChannelScale, measured: MeasuredOscillator): RingDownStart | null {
+/** What the start of the fit is found from; marks the windows whose samples are too few. */
+function toStartFrom(samples: readonly DwellSamples[], scale: ChannelScale): RingDownData[] {
   const data: RingDownData[] = [];
   for (const one of samples) {
     const windowS = (one.window.toUtcMs - one.window.fromUtcMs) / 1000;
@@ -113,6 +117,10 @@ function startOf(samples: readonly DwellSamples[], scale: ChannelScale, measured
     one.window.why = reasonAgainstSamples(one, averages);
     if (one.window.why === null && one.window.row.outcome !== 'cut short') data.push({ tS: averages.t, y: averages.y });
   }
+  return data;
+}
+
+function startOf(data: readonly RingDownData[], measured: MeasuredOscillator): RingDownStart | null {
   const hint =
     measured.omega === null ? null : { omega: measured.omega.value, gamma: measured.gamma?.value ?? 0.05 * measured.omega.value };
   return ringDownStart(data, hint) ?? hint;

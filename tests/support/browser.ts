@@ -37,7 +37,7 @@ export interface Browser {
 export async function openBrowser(baseURL: string, size: Size, installs = false): Promise<Browser> {
   const profile = mkdtempSync(join(tmpdir(), 'evenfall-browser-'));
   const context = await chromium.launchPersistentContext(profile, {
-    executablePath: '/usr/bin/chromium',
+    executablePath: '/usr/bin/chromium-headless-shell',
     headless: true,
     args: flags,
     baseURL,

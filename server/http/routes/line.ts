@@ -188,4 +188,23 @@ const haltRoutes = [
   mount(contracts.stopRig, (context) => haltRig(context, 'stop')),
 ];
 
-export const lineRoutes = [...guidedRoutes, ...teachRoutes, ...haltRoutes];
+const takeOverRoutes = [
+  mount(contracts.takeController, async (context) => {
+    const { body, params, membership, services } = context;
+    const rig = await load(context, params.rigId);
+    const keptOutBy = services.stations.get(rig.id)?.link.health().higherEpoch ?? null;
+    if (keptOutBy !== body.keptOutBy)
+      throw new ProblemError(
+        'not-possible-now',
+        keptOutBy === null
+          ? 'The controller is not kept from this server at the moment: there is nothing to take over.'
+          : `The controller obeys number ${keptOutBy} now, not ${body.keptOutBy}: another server may be driving it at this moment. Look again.`,
+      );
+    await audited(context, { kind: 'rig.controller-taken-over', data: () => ({ rigId: rig.id, keptOutBy }) }, async () => undefined);
+    const number = await services.stations.takeController({ labId: membership.labId, rigId: rig.id }, keptOutBy);
+    if (number === null) throw new ProblemError('not-possible-now', 'This server does not drive the rig at the moment.');
+    return { number };
+  }),
+];
+
+export const lineRoutes = [...takeOverRoutes, ...guidedRoutes, ...teachRoutes, ...haltRoutes];

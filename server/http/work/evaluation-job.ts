@@ -1,5 +1,5 @@
 import * as z from 'zod';
-import type { Job } from '@/server/interfaces/jobs';
+import { CutShort, type Job } from '@/server/interfaces/jobs';
 import { beginEvaluation, endEvaluation } from '@/server/store/evaluations';
 import { findRun } from '@/server/store/runs-read';
 import { archiveInputOf } from '../archive-input';
@@ -19,7 +19,7 @@ export async function workEvaluation(services: Services, job: Job): Promise<void
     const { result, curves } = await services.tasks.evaluate(await archiveInputOf(services, run), { channel: evaluation.channel });
     await endEvaluation(db, payload, { result, curves, channel: evaluation.channel, finishedAt: services.clock.utcMs() });
   } catch (error) {
-    if (!isUnusable(error) && job.attempt < job.maxAttempts) throw error;
+    if (error instanceof CutShort || (!isUnusable(error) && job.attempt < job.maxAttempts)) throw error;
     const why = error instanceof Error ? error.message : String(error);
     await endEvaluation(db, payload, { error: why, finishedAt: services.clock.utcMs() });
     if (!isUnusable(error)) services.log.error({ err: error, runId: run.id }, 'an evaluation failed');

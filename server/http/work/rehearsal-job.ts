@@ -1,6 +1,6 @@
 import * as z from 'zod';
 import type { SimulatedRun } from '@/shared/archive/run-records';
-import type { Job } from '@/server/interfaces/jobs';
+import { CutShort, type Job } from '@/server/interfaces/jobs';
 import { findOrMakeChannel } from '@/server/store/imports';
 import { findRun, markRunFailed, storeRehearsal } from '@/server/store/runs-read';
 import { storedRunView } from '../run-view';
@@ -34,7 +34,7 @@ export async function workRehearsal(services: Services, job: Job): Promise<void>
     }
     await storeRehearsal(db, run, records);
   } catch (error) {
-    if (job.attempt < job.maxAttempts) throw error;
+    if (error instanceof CutShort || job.attempt < job.maxAttempts) throw error;
     await markRunFailed(db, run, {
       why: `The rehearsal came to no end: ${error instanceof Error ? error.message : String(error)}`,
       nowUtcMs: services.clock.utcMs(),

@@ -45,6 +45,7 @@ const figures = {
   roundTripP50Ms: 2,
   roundTripP95Ms: 3,
   discardedBytes: 0,
+  keptOutBy: null,
   droppedByController: 0,
   retries: 0,
   drift: null,

@@ -15,7 +15,7 @@ const healthy: LinkHealthView = {
     roundTripP50Ms: 2.2,
     roundTripP95Ms: 3.1,
   },
-  ...{ discardedLines: 0, discardedBytes: 0, droppedByController: 0, retries: 0, reconnects: 0, protocol: '1.0' },
+  ...{ discardedLines: 0, discardedBytes: 0, droppedByController: 0, retries: 0, reconnects: 0, protocol: '1.0', keptOutBy: null },
   ...{ clock: { offsetMs: 102_481.204, uMs: 0.2 }, drift: { ppm: 18.04, uPpm: 0.31 } },
 };
 const rowsOf = (change: Partial<LinkHealthView> = {}) =>

@@ -102,6 +102,7 @@ export const rows: Readonly<Record<string, Row>> = {
   nudge: { params: rig, body: () => ({ guidedId: nobody, steps: 1 }), allowed: 409 },
   homeByHand: { params: rig, body: () => ({ guidedId: nobody }), allowed: 409 },
   teachLimits: { params: rig, body: () => ({ guidedId: nobody }), ifMatch: () => '"77"', allowed: 412 },
+  takeController: { params: rig, body: () => ({ keptOutBy: 7 }), allowed: 409 },
   holdRig: { params: rig, body: () => ({}), allowed: 202 },
   stopRig: { params: rig, body: () => ({}), allowed: 202 },
   listProtocols: { params: lab, allowed: 200 },

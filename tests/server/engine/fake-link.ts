@@ -99,6 +99,8 @@ export class FakeLink implements TurntableLink {
     return null;
   }
 
+  raiseEpoch(): void {}
+
   async teach(limits: ControllerLimits): Promise<TeachOutcome> {
     return { taught: true, limits };
   }

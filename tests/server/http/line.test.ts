@@ -1,6 +1,11 @@
+import { eq } from 'drizzle-orm';
 import { demoIds } from '@/db/demo/seed';
+import { rigLeases } from '@/db/schema';
+import { createLink } from '@/server/links/link-driver';
 import { lineMessageSchema, type LineMessage } from '@/shared/contracts/link';
 import type { Role } from '@/shared/contracts/roles';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import type { RigMotion } from '@/shared/rig/document';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol } from '@/tests/support/lab-server';
 import { LiveReader } from '@/tests/support/live-reader';
@@ -193,5 +198,44 @@ describe('the line', () => {
     expect(last().controller?.armKey).toBe(false);
     turntable().turnArmKey(true);
     reader.close();
+  });
+});
+
+describe('a controller that obeys another server', () => {
+  const rivalsNumber = 4_000;
+
+  async function drivenByARival(): Promise<void> {
+    const rival = createLink({ factory: turntable().factory, clock: lab.clock, rig: demoRigWide.motion as RigMotion, epoch: rivalsNumber });
+    lab.world.controller(demoIds.rig).unplug();
+    await lab.advance(1_000);
+    lab.world.controller(demoIds.rig).plug();
+    rival.open();
+    await lab.advance(1_000);
+    await rival.close();
+    await lab.advance(10_000);
+  }
+  const health = () => lab.built.services.stations.get(demoIds.rig)?.link.health();
+
+  test('is kept from this one until a keeper, who knows that the other one is gone, takes it over for good', async () => {
+    await post('/line/take-over', { keptOutBy: rivalsNumber }).expect(409);
+    await drivenByARival();
+    expect(health()).toMatchObject({
+      condition: 'refused',
+      higherEpoch: rivalsNumber,
+      detail: expect.stringContaining('take the controller over'),
+    });
+    expect((await post('/line/take-over', { keptOutBy: rivalsNumber - 1 }).expect(409)).body.detail).toContain(
+      `obeys number ${rivalsNumber} now`,
+    );
+    expect((await post('/line/take-over', { keptOutBy: rivalsNumber }).expect(202)).body).toEqual({ number: rivalsNumber + 1 });
+    await lab.advance(10_000);
+    expect(health()).toMatchObject({ condition: 'ready', higherEpoch: null });
+    expect((await audit())[0]).toMatchObject({ kind: 'rig.controller-taken-over', data: { keptOutBy: rivalsNumber } });
+    // The number is the lease's: the next process goes on above it.
+    const [row] = await lab.database.connection.db
+      .select({ epoch: rigLeases.epoch })
+      .from(rigLeases)
+      .where(eq(rigLeases.rigId, demoIds.rig));
+    expect(row?.epoch).toBe(rivalsNumber + 1);
   });
 });

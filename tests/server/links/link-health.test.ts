@@ -71,6 +71,10 @@ test('another server with a higher epoch is named by it', async () => {
   link.open();
   await virtual.advance(1_000);
   expect(link.health()).toMatchObject({ condition: 'refused', higherEpoch: 9 });
+  // Its lease was taken anew above that number: the controller listens again.
+  link.raiseEpoch(10);
+  await virtual.advance(10_000);
+  expect(link.health()).toMatchObject({ condition: 'ready', higherEpoch: null });
   await link.close();
 });
 

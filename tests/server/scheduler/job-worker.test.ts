@@ -1,5 +1,5 @@
 import { VirtualClock } from '@/server/engine/virtual-clock';
-import type { Job, JobHandler, JobQueue } from '@/server/interfaces/jobs';
+import { CutShort, type Job, type JobHandler, type JobQueue } from '@/server/interfaces/jobs';
 import { startJobWorker } from '@/server/scheduler/job-worker';
 
 const settle = () => new Promise<void>((resolve) => setImmediate(resolve));
@@ -23,6 +23,10 @@ function listQueue(kinds: string[]) {
     },
     fail: (job, why) => {
       done.push(`fail ${job.id}: ${why}`);
+      return Promise.resolve();
+    },
+    giveBack: (job) => {
+      done.push(`give back ${job.id}`);
       return Promise.resolve();
     },
   };
@@ -58,6 +62,13 @@ test('a failed job is reported and put back, and the next is done', async () => 
   await settle();
   expect(done).toEqual(['fail 0: refused', 'finish 1']);
   expect(problems).toHaveLength(1);
+  await worker.stop();
+});
+
+test('a job that the end of the process cuts short is given back and has not failed', async () => {
+  const { done, worker } = work(['mail'], () => Promise.reject(new CutShort()));
+  await settle();
+  expect(done).toEqual(['give back 0']);
   await worker.stop();
 });
 

@@ -84,6 +84,16 @@ test('failures are tried again after 5, 10, 20 s and given up after the last', a
   expect(await queue().take(['mail'])).toBeNull();
 });
 
+test('a job that is given back is due at once, and the attempt does not count', async () => {
+  const { id } = await ask({}, { maxAttempts: 1 });
+  for (let ends = 0; ends < 3; ends += 1) {
+    const job = await queue().take(['mail']);
+    expect(job).toMatchObject({ id, attempt: 1 });
+    if (job !== null) await queue().giveBack(job);
+  }
+  expect(await rowOf(id)).toMatchObject({ state: 'waiting', attempts: 0 });
+});
+
 test('a job that kills its worker each time is given up too', async () => {
   const { id } = await ask({}, { maxAttempts: 2 });
   for (let n = 0; n < 2; n += 1) {
