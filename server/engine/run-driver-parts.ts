@@ -48,3 +48,6 @@ export type Answer =
       kept?: Promise<unknown>;
     }
   | { ok: false; why: string };
+
+/** What answers on a line that is ready; null while it is not. */
+export const readyController = (link: TurntableLink) => (link.health().condition === 'ready' ? link.controller() : null);

@@ -9,7 +9,7 @@ import { beginRun, deadlineOf, isArmExpected, isRunOver, isUnderWay, wantsMotion
 import { type Advance, CHART_VERSION, type Effect, type RunEvent, type RunSnapshot } from './run-context';
 import { advanceSafely } from './advance-safely';
 import { createPredictor, factsOf, plannedDwells, type RunFacts, summaryOf, withDatabase } from './run-facts';
-import type { Answer, RunChange, RunDriverParts } from './run-driver-parts';
+import { type Answer, readyController, type RunChange, type RunDriverParts } from './run-driver-parts';
 import { RunRequests } from './run-requests';
 import { DATABASE_GRACE_MS, RunSaver } from './run-saver';
 import { ALIVE_MS, RunTimers } from './run-timers';
@@ -84,9 +84,7 @@ export class RunDriver {
 
   /** Begins a new run: at once where the link is ready, else as soon as it is. */
   start(): void {
-    const { link } = this.parts;
-    const controller = link.health().condition === 'ready' ? link.controller() : null;
-    this.enqueue({ event: { type: 'begin', at: this.now(), controller } });
+    this.enqueue({ event: { type: 'begin', at: this.now(), controller: readyController(this.parts.link) } });
     this.timers.keepAlive();
   }
 
@@ -98,7 +96,7 @@ export class RunDriver {
     this.enqueue({ event: { type: 'server-restarted', at: this.now(), aliveUtcMs, serverName } });
     const open = openMotions(this.snapshot);
     link.takeUp(open);
-    const controller = open.length === 0 && link.health().condition === 'ready' ? link.controller() : null;
+    const controller = open.length > 0 ? null : readyController(link);
     if (controller !== null) this.heard({ kind: 'ready', at: this.now(), controller, sameBoot: true });
     this.timers.keepAlive();
   }

@@ -44,8 +44,6 @@ export class Conversation {
   /** Events count from the first status of a boot on; what comes before belongs to somebody else. */
   private following = false;
   private announced = false;
-  /** Of the events up to this number, which happened before anybody here listened, only those of own commands are told. */
-  private listeningFrom = 0;
   /** Boot identifier when the link was last ready. */
   private bootBefore: string | null = null;
   private lastEventUs = 0;
@@ -68,11 +66,8 @@ export class Conversation {
   /** Commands of another process were taken up: before the link is ready, all is read again that the controller still keeps of them (SPEC 7.4). */
   readFromOldest(): void {
     if (!this.following) return;
-    this.events.startAfter(0);
-    this.events.heardOf(this.setting.report.upTo.event);
-    this.lastEventUs = 0;
-    this.rereadUpTo = 0;
-    this.announced = false;
+    this.events.rereadAll();
+    [this.lastEventUs, this.rereadUpTo, this.announced] = [0, 0, false];
   }
 
   hearEvent(event: EventMessage): void {
@@ -193,7 +188,6 @@ export class Conversation {
     this.lastEventUs = 0;
     this.following = false;
     this.announced = false;
-    this.listeningFrom = 0;
     if (before === null) return;
     // The events of the new start are all of interest, those before the first greeting ever are not.
     this.events.startAfter(0);
@@ -226,10 +220,7 @@ export class Conversation {
   }
 
   private heardFirstStatus(reply: Reply, body: OkBody): void {
-    if (!this.following) {
-      this.listeningFrom = body.event;
-      this.events.startAfter(this.setting.book.holdsTakenUp ? 0 : body.event);
-    }
+    if (!this.following) this.events.startAfter(body.event, { reread: this.setting.book.holdsTakenUp });
     this.following = true;
     this.setting.report.takeReply(reply, body);
     this.events.heardOf(body.event);
@@ -268,7 +259,8 @@ export class Conversation {
     const { report, book, telling, lease } = this.setting;
     for (const event of events) {
       const { what } = event;
-      const isPast = event.number <= this.listeningFrom;
+      // Of what happened before anybody here listened, only what became of own commands is told.
+      const isPast = this.events.isPast(event.number);
       this.event = event;
       this.lastEventUs = event.atUs;
       report.takeEvent(event);

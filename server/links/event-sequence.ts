@@ -10,12 +10,25 @@ export class EventSequence {
   /** Greatest number that is known to exist. */
   private newest = 0;
   private readonly early = new Map<number, EventMessage>();
+  /** Events up to this number happened before anybody here listened. */
+  private past = 0;
 
-  /** Counts from after `number`: what came before is not of interest. */
-  startAfter(number: number): void {
-    this.last = number;
+  /** Counts from after `number`: what came before is not of interest, or only what the ring still keeps of it (`reread`). */
+  startAfter(number: number, { reread = false } = {}): void {
+    this.past = number;
+    this.last = reread ? 0 : number;
     this.newest = number;
     this.early.clear();
+  }
+
+  /** Begins anew with the oldest event that the controller keeps. */
+  rereadAll(): void {
+    this.last = 0;
+    this.early.clear();
+  }
+
+  isPast(number: number): boolean {
+    return number <= this.past;
   }
 
   /** A reply told that events up to `number` have happened. */
