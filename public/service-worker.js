@@ -1,8 +1,9 @@
 /*
  * Keeps the built program on the device, so that a page with a bad network finds its parts, and shows offline.html where the server does not
  * answer. It keeps nothing that the server says: whatever lies under /api, event streams above all, passes it by untouched, and nothing is sent
- * again or later. The build writes its version and the files it keeps into the line below.
+ * again or later. Push messages have a file of their own. The build writes its version and the files it keeps into the line below.
  */
+importScripts('/push-handler.js');
 const build = { version: 'unbuilt', files: [] };
 
 const offlinePage = '/offline.html';

@@ -1,6 +1,6 @@
 #!/usr/bin/env node
 /**
- * Runs one of the commands that look after a lab's database: audit-verify. The database is that of DATABASE_URL; without it that of
+ * Runs one of the commands that look after a lab's database: audit-verify, backup, restore. The database is that of DATABASE_URL; without it that of
  * `npm start`, which is started for the while where it does not run.
  */
 import { join } from 'node:path';
@@ -11,14 +11,14 @@ import { root, state } from './lib/paths.mjs';
 import { pass } from './lib/run.mjs';
 import { giveUp } from './lib/say.mjs';
 
-const commands = ['audit-verify'];
+const programs = { 'audit-verify': ['audit-verify'], backup: ['backup', 'backup'], restore: ['backup', 'restore'] };
 const [name, ...args] = process.argv.slice(2);
-if (!commands.includes(name)) giveUp(`unknown command ${name}: ${commands.join(', ')}`);
+const [program, ...first] = programs[name] ?? giveUp(`unknown command ${name}: ${Object.keys(programs).join(', ')}`);
 await ensureNodeModules();
 const own = process.env.DATABASE_URL === undefined || process.env.DATABASE_URL === '' ? await ownDatabase() : null;
 process.exitCode = await pass(
   process.execPath,
-  ['--import', join(root, 'node_modules/tsx/dist/loader.mjs'), join(root, 'server', 'boot', `${name}.ts`), ...args],
+  ['--import', join(root, 'node_modules/tsx/dist/loader.mjs'), join(root, 'server', 'boot', `${program}.ts`), ...first, ...args],
   {
     cwd: process.env.INIT_CWD ?? process.cwd(),
     env: {

@@ -68,6 +68,7 @@ function Card({ card }: { card: DoorCard }) {
         <Line label="Next measurement" value={formatClockWithZone(Date.parse(card.nextAt), { timeZone, weekday: true })} />
       )}
       <Line label="Ring" value={card.ring} />
+      {card.onCall.length === 0 ? null : <Line label="On call" value={card.onCall.join(', then ')} />}
       <Body tone="dim">As of {formatClock(Date.parse(card.serverAt), { timeZone, precision: 'seconds' })}. This card moves nothing.</Body>
     </View>
   );

@@ -3,8 +3,12 @@ import { Account } from './account';
 import { Appearance } from './appearance';
 import { GivenUpJobs } from './given-up-jobs';
 import { LabSettings } from './lab-settings';
+import { AlarmsLink } from './alarms-link';
 import { Members } from './members';
+import { OnCall } from './on-call';
+import { OwnCall } from './own-call';
 import { RoleMatrix } from './role-matrix';
+import { Watcher } from './watcher';
 
 /** The lab: how it looks here, who is in it, what each may do. */
 export function LabScreen() {
@@ -23,6 +27,10 @@ export function LabScreen() {
     >
       <Appearance />
       <LabSettings />
+      <AlarmsLink />
+      <OnCall />
+      <OwnCall />
+      <Watcher />
       <Members />
       <GivenUpJobs />
     </Screen>

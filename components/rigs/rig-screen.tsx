@@ -6,6 +6,7 @@ import { PlanView } from '@/components/charts/plan-view';
 import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, Section, useWide } from '@/components/ui';
 import type { RigView } from '@/shared/contracts/rigs';
 import { ArmPanel } from './arm-panel';
+import { ChannelLimits } from './channel-limits';
 import { linkState } from './link-words';
 import { LinkPanel } from './link-panel';
 import { LiveFacts } from './live-facts';
@@ -53,6 +54,7 @@ export function RigScreen() {
         <>
           <RigDocumentSection rig={rig} etag={query.data?.etag ?? undefined} />
           <MassSets rig={rig} />
+          <ChannelLimits rigId={rig.id} />
         </>
       }
     >

@@ -1,7 +1,8 @@
 import { useRouter, type Href } from 'expo-router';
 import { View } from 'react-native';
-import { serverNowIso, useLab, useLabCall, useLabOnce, useSession, wordsOf } from '@/components/api';
+import { serverNowIso, useLab, useLabCall, useLabOnce, useLabQuery, useSession, wordsOf } from '@/components/api';
 import { Body, Label, Num, Panel, PressAndKeep, ProblemNotice, Section } from '@/components/ui';
+import { getOnCall } from '@/shared/contracts/calls';
 import { reviewStart } from '@/shared/contracts/reviews';
 import type { RigView } from '@/shared/contracts/rigs';
 import { startRun } from '@/shared/contracts/runs';
@@ -32,6 +33,12 @@ export function StartReview({ rig, choice }: { rig: RigView; choice: StartChoice
   );
 }
 
+/** Whom an alarm of this run rings, in their order. */
+function onCallWords(order: readonly { userId: string; name: string }[], ownId: string): string {
+  if (order.length === 0) return 'nobody: set the order on the page of the lab';
+  return order.map(({ userId, name }) => (userId === ownId ? `${name} (you)` : name)).join(', then ');
+}
+
 interface ReviewProps {
   rig: RigView;
   choice: StartChoice;
@@ -43,13 +50,14 @@ interface ReviewProps {
 function Review({ rig, choice, durationS, finishAt, firstMove }: ReviewProps) {
   const { timeZone } = useLab();
   const { state } = useSession();
+  const onCall = useLabQuery(getOnCall);
   const facts: readonly (readonly [string, string])[] = [
     ['Rig', `${rig.name}, revision ${rig.revision}`],
     ['Protocol', `${choice.protocolName}, revision ${choice.revision}`],
     ['Mass set', rig.massSets.find(({ id }) => id === choice.massSetId)?.label ?? '–'],
     ['First move', firstMove],
     ['On site', rig.arm === null ? 'nobody: the rig is not armed' : `${rig.arm.name}${rig.arm.note === '' ? '' : `: “${rig.arm.note}”`}`],
-    ['On call', state.kind === 'signed-in' ? `${state.me.user.name}, who starts it` : '–'],
+    ['On call', onCallWords(onCall.data?.data.order ?? [], state.kind === 'signed-in' ? state.me.user.id : '')],
   ];
   return (
     <Panel className="gap-4">

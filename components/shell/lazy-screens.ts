@@ -26,6 +26,9 @@ const screen = (name: keyof Screens): ComponentType =>
     return createElement((loaded ?? use(fetchScreens()))[name]);
   };
 
+export const AlarmBar = screen('AlarmBar');
+export const AlarmScreen = screen('AlarmScreen');
+export const AlarmsScreen = screen('AlarmsScreen');
 export const CalendarScreen = screen('CalendarScreen');
 export const DataScreen = screen('DataScreen');
 export const DoorScreen = screen('DoorScreen');

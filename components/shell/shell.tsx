@@ -3,7 +3,7 @@ import { Suspense, useEffect, type ReactNode } from 'react';
 import { View } from 'react-native';
 import { isProblem, useConnection, useSession, wordsOf } from '@/components/api';
 import { Body, Empty, Loading, Offline, ProblemNotice } from '@/components/ui';
-import { fetchScreens, RunningBar } from './lazy-screens';
+import { AlarmBar, fetchScreens, RunningBar } from './lazy-screens';
 import { NavigationBar } from './navigation-bar';
 import { NewVersion } from './new-version';
 
@@ -28,6 +28,7 @@ export function Shell({ children }: { children: ReactNode }) {
           </Empty>
         ) : (
           <Suspense fallback={<Loading />}>
+            <AlarmBar />
             <RunningBar />
             <NewVersion />
             {children}

@@ -13,6 +13,7 @@ import { allRigs } from '../store/rigs';
 import { anchorAudit } from './audit-anchor';
 import type { BuildParts } from './build-parts';
 import { buildServices, type Inside } from './build-services';
+import { MetricsPort } from './metrics-port';
 
 export interface BuiltServer {
   app: Express;
@@ -34,15 +35,20 @@ export function buildServer(parts: BuildParts): BuiltServer {
   const app = createApp(services, allRoutes);
   const server = createServer(app);
   const life = new Life(services, inside, parts);
+  const metrics = new MetricsPort(services);
   return {
     app,
     services: Object.assign(services, { idle: () => idle(services, inside) }),
     start: () => life.start(),
     stop: async () => {
       await life.stop();
+      await metrics.close();
       await closeServer(server);
     },
-    listen: () => listen(server, services),
+    listen: async () => {
+      services.config.metricsPort = await metrics.listen(services.config.metricsPort);
+      return listen(server, services);
+    },
   };
 }
 

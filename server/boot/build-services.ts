@@ -1,6 +1,4 @@
 import { randomBytes, randomUUID } from 'node:crypto';
-import { statfs } from 'node:fs/promises';
-import { pino, type Logger } from 'pino';
 import { createSessions } from '../auth/sessions';
 import { sha256Hex } from '../evaluation/sha256';
 import { AccessDirectory } from '../http/access-directory';
@@ -9,6 +7,7 @@ import { LiveHub } from '../http/live/live-hub';
 import { LineHub } from '../http/live/line-hub';
 import { liveSourceOf, mayStillRead } from '../http/live/live-source';
 import { lineOf } from '../http/line-view';
+import { AnswerCounts } from '../http/metrics';
 import { Reviews } from '../http/reviews';
 import type { Services } from '../http/services';
 import { AlarmWatch } from '../http/work/alarm-watch';
@@ -17,7 +16,6 @@ import { rehearsalJobKind, workRehearsal } from '../http/work/rehearsal-job';
 import { tellStarter } from '../http/work/tell-starter';
 import type { MailPort } from '../interfaces/mail';
 import type { StationRig } from '../interfaces/rig-stations';
-import type { ServerConfig } from '../interfaces/server-config';
 import { alarmJobs } from '../notify/alarm-jobs';
 import { mailJobs } from '../notify/mail-jobs';
 import { createOutgoing } from '../notify/outgoing';
@@ -31,7 +29,8 @@ import { createSampleStore } from '../store/sample-store';
 import { Background } from './background';
 import type { BuildParts } from './build-parts';
 import { buildRigSide, type RigSide } from './build-rigs';
-import { freeDisk } from './free-disk';
+import { createLog } from './create-log';
+import { freeBytesAt, freeDisk } from './free-disk';
 import { JobCrew } from './job-crew';
 import { RigTaking } from './take-rigs';
 import { createWorkerTasks } from './worker-tasks';
@@ -78,7 +77,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     ...{ clock, log, database, sessions, access, samples, stations, arms, arming, locks, supervisor, guided, soak, live, lines, newToken },
     config: { ...config, limits: { ...config.limits } },
     ...{ newId: randomUUID, sha256: sha256Hex },
-    reviews: new Reviews({ clock, newToken }),
+    ...{ reviews: new Reviews({ clock, newToken }), answers: new AnswerCounts() },
     idempotency: createIdempotency(database.db, nowUtcMs),
     ...buildTelling(parts, () => services.config.port),
     activeRuns: new ActiveRuns({ supervisor, live }),
@@ -134,12 +133,6 @@ function buildTelling({ database: { db }, clock, config, overrides = {} }: Build
   return { mail, push, outgoing, tell: { db, clock, mail, push, origin } };
 }
 
-const freeBytesAt = (folder: string): Promise<number | null> =>
-  statfs(folder).then(
-    ({ bavail, bsize }) => bavail * bsize,
-    () => null,
-  );
-
 /** Workers of this process: mails do not wait behind a rehearsal. */
 function buildCrew({ overrides = {} }: BuildParts, services: Services): JobCrew {
   const { clock, log, database, mail } = services;
@@ -162,18 +155,4 @@ function openPromise(): { promise: Promise<void>; resolve: () => void } {
     resolve = done;
   });
   return { promise, resolve };
-}
-
-/** Logs as JSON lines on stderr; what could let somebody in or name a person is taken out, wherever it stands. */
-function createLog(config: ServerConfig): Logger {
-  const secret = ['password', 'token', 'cookie', 'authorization', 'email', 'passwordHash'];
-  return pino(
-    {
-      level: config.mode === 'test' ? 'silent' : config.logLevel,
-      base: undefined,
-      timestamp: pino.stdTimeFunctions.isoTime,
-      redact: secret.flatMap((key) => [key, `*.${key}`, `*.*.${key}`, `*.*.*.${key}`]),
-    },
-    pino.destination(2),
-  );
 }

@@ -40,6 +40,7 @@ const environmentSchema = z.object({
         .map((host) => host.trim().toLowerCase())
         .filter((host) => host !== ''),
     ),
+  EVENFALL_METRICS_PORT: z.coerce.number().int().min(0).max(65_535).optional(),
   EVENFALL_LOG_LEVEL: z.enum(['silent', 'fatal', 'error', 'warn', 'info', 'debug']).default('info'),
   EVENFALL_REQUESTS_PER_MINUTE: count(10, 1_000_000, 1200),
   EVENFALL_INTERVENTIONS_PER_MINUTE: count(10, 1_000_000, 600),
@@ -76,6 +77,7 @@ export function readConfig(environment: Record<string, string | undefined>): Ser
     smtpUrl: env.EVENFALL_SMTP_URL ?? null,
     mailFrom: env.EVENFALL_MAIL_FROM,
     privateHosts: env.EVENFALL_PRIVATE_HOSTS,
+    metricsPort: env.EVENFALL_METRICS_PORT ?? null,
     logLevel: env.EVENFALL_LOG_LEVEL,
     limits: {
       requestsPerMinute: env.EVENFALL_REQUESTS_PER_MINUTE,

@@ -9,3 +9,10 @@ export async function freeDisk(folder: string): Promise<number | null> {
     return null;
   }
 }
+
+/** Bytes that this process may still write on the disk of a folder; null likewise. */
+export const freeBytesAt = (folder: string): Promise<number | null> =>
+  statfs(folder).then(
+    ({ bavail, bsize }) => bavail * bsize,
+    () => null,
+  );

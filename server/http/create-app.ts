@@ -7,6 +7,7 @@ import { MemoryIdempotency } from './idempotent';
 import { ProblemError, problemOf } from './problem-error';
 import { problemPages } from './problem-pages';
 import { limitRate } from './rate-limits';
+import { healthz, readyz } from './readiness';
 import { logRequests, requestIdOf } from './request-log';
 import type { MountedRoute } from './route-context';
 import { assertSameOrigin } from './same-origin';
@@ -24,6 +25,8 @@ export function createApp(services: Services, routes: readonly MountedRoute[]): 
   app.set('trust proxy', config.trustedProxies);
   app.set('query parser', 'simple');
   app.use(logRequests(services), securityHeaders(config, Object.values(pages)), compression({ filter: mayCompress }));
+  app.get('/healthz', healthz);
+  app.get('/readyz', limitRate(services.config.limits.requestsPerMinute), readyz(services));
   app.use('/api', apiRouter(services, routes));
   app.use('/problems', problemPages());
   app.use(webFiles(config.webDir, { pages, hasSession: (req) => readSessionToken(req, config) !== null }));

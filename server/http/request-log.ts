@@ -8,23 +8,16 @@ export const requestIdOf = (res: Response): string => String(res.locals.requestI
  * One line for each request of the API: method, the route's pattern (its address may hold a token), status and time.
  * No headers, no bodies.
  */
-export function logRequests(services: Pick<Services, 'log' | 'clock' | 'newId'>): RequestHandler {
+export function logRequests(services: Pick<Services, 'log' | 'clock' | 'newId' | 'answers'>): RequestHandler {
   return (req, res, next) => {
     const startMs = services.clock.monotonicMs();
     res.locals.requestId = services.newId();
     res.once('finish', () => {
       if (!req.originalUrl.startsWith('/api/')) return;
       const route: unknown = (req as { route?: { path?: unknown } }).route?.path;
-      services.log.info(
-        {
-          requestId: requestIdOf(res),
-          method: req.method,
-          route: typeof route === 'string' ? route : null,
-          status: res.statusCode,
-          ms: Math.round(services.clock.monotonicMs() - startMs),
-        },
-        'answered',
-      );
+      const answer = { method: req.method, status: res.statusCode, ms: Math.round(services.clock.monotonicMs() - startMs) };
+      services.answers.answered(answer);
+      services.log.info({ requestId: requestIdOf(res), route: typeof route === 'string' ? route : null, ...answer }, 'answered');
     });
     next();
   };

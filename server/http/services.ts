@@ -21,6 +21,7 @@ import type { AccessDirectory } from './access-directory';
 import type { ActiveRuns } from './active-runs';
 import type { LineHub } from './live/line-hub';
 import type { LiveHub } from './live/live-hub';
+import type { AnswerCounts } from './metrics';
 import type { Reviews } from './reviews';
 
 /** Everything a route may use; built once by `server/boot/build-server.ts`. */
@@ -28,6 +29,7 @@ export interface Services {
   config: ServerConfig;
   clock: Clock;
   log: Logger;
+  answers: AnswerCounts;
   /** A fresh random id (UUID). */
   newId(): string;
   /** A fresh secret of 256 bits for links in mails, base64url. */

@@ -22,6 +22,8 @@ export interface ServerConfig {
   mailFrom: string;
   /** Hosts (`name:port`) of the own network that a sign of life or a push message may go to, also without TLS; all others must be public and speak https. */
   privateHosts: readonly string[];
+  /** Port on loopback with figures for Prometheus, 0: any free one; null: none. */
+  metricsPort: number | null;
   logLevel: 'silent' | 'fatal' | 'error' | 'warn' | 'info' | 'debug';
   limits: {
     /** Requests a minute and address, without hold and stop. */

@@ -94,8 +94,9 @@ async function ring(parts: TellParts, which: Occurrence): Promise<void> {
       ? ringingOf(alarm.code, { leftMs: about.leftMs, someoneNear })
       : alarm.rings;
   const group = await groupIds(db, alarm);
-  const rung = (await calls.rungSince(db, alarm.labId, (alarm.raisedAt ?? 0) - explainedMs)).filter(({ alarmId }) =>
-    group.includes(alarmId),
+  // Nobody is rung twice for one cause; raised anew it is another.
+  const rung = (await calls.rungSince(db, alarm.labId, (alarm.raisedAt ?? 0) - explainedMs)).filter(
+    ({ alarmId, occurrence }) => group.includes(alarmId) && (alarmId !== alarm.id || occurrence === which.occurrence),
   );
   const known = rung.flatMap(({ userId }) => (userId === null ? [] : [userId]));
   const next = nextCallee(about.callees, { ringing, utcMs: clock.utcMs(), timeZone: about.timeZone, rung: known });

@@ -173,6 +173,9 @@ const words: Partial<Record<AlarmEvent['type'], (event: AlarmEvent) => string>> 
   confirm: (event) => ('note' in event ? event.note : ''),
 };
 
+/** Facts that nobody does, also where somebody's act brings them about. */
+const byItself: readonly AlarmFact[] = ['raised', 'returned', 'latched'];
+
 async function writeHistory(
   tx: Transaction,
   { labId, id, snapshot, words: found }: AlarmRecord,
@@ -183,7 +186,8 @@ async function writeHistory(
   const said = words[event.type]?.(event) ?? '';
   await tx.insert(alarmHistory).values(
     facts.map((fact) => ({
-      ...{ labId, alarmId: id, at: event.utcMs, fact, occurrence: snapshot.occurrence, by },
+      ...{ labId, alarmId: id, at: event.utcMs, fact, occurrence: snapshot.occurrence },
+      by: byItself.includes(fact) ? '' : by,
       words: fact === 'raised' ? found : said,
     })),
   );

@@ -71,10 +71,14 @@ export const hopsOfOccurrence = (db: Handle, { labId, alarmId, occurrence }: { l
     .where(and(eq(alarmHops.labId, labId), eq(alarmHops.alarmId, alarmId), eq(alarmHops.occurrence, occurrence)))
     .orderBy(alarmHops.seq);
 
-/** Messages of these alarms since, whatever the occurrence: nobody is rung twice for one cause. */
-export async function rungSince(db: Handle, labId: string, sinceUtcMs: number): Promise<{ alarmId: string; userId: string | null }[]> {
+/** Messages of a lab since. */
+export async function rungSince(
+  db: Handle,
+  labId: string,
+  sinceUtcMs: number,
+): Promise<{ alarmId: string; occurrence: number; userId: string | null }[]> {
   return db
-    .select({ alarmId: alarmHops.alarmId, userId: alarmHops.userId })
+    .select({ alarmId: alarmHops.alarmId, occurrence: alarmHops.occurrence, userId: alarmHops.userId })
     .from(alarmHops)
     .where(and(eq(alarmHops.labId, labId), gte(alarmHops.at, sinceUtcMs)));
 }

@@ -16,6 +16,8 @@ export const doorCardSchema = z.strictObject({
   nextAt: instantSchema.nullable(),
   /** Whom to ring, as the lab wrote it. */
   ring: z.string(),
+  /** Who is on call, in the order in which alarms ring them; at most three. */
+  onCall: z.array(z.string()),
   serverAt: instantSchema,
 });
 export type DoorCard = z.infer<typeof doorCardSchema>;

@@ -1,6 +1,7 @@
 import type { AxeResults, run } from 'axe-core';
 import { readFileSync } from 'node:fs';
 import { demoIds } from '@/db/demo/seed';
+import { reportCondition } from '@/server/store/alarms';
 import { sizes, type Size } from '../support/browser';
 import { Hand, until } from './support/hand';
 import { labOfThisFile } from './support/lab';
@@ -23,6 +24,7 @@ interface Place {
 
 let finishedId: string;
 let runningId: string;
+let alarmId: string;
 beforeAll(async () => {
   finishedId = await finishedNight(lab(), 2);
   const evaluations = `/labs/${demoIds.lab}/runs/${finishedId}/evaluations`;
@@ -30,6 +32,11 @@ beforeAll(async () => {
   await until(async () => (await lab().server.as('viewer', 'GET', evaluations)).body.items[0]?.state === 'done', 'the evaluation');
   runningId = await started(lab(), await issued(lab(), shortNight('Going on', 12)));
   await lab().pass(60);
+  const { services } = lab().server;
+  const place = { labId: demoIds.lab, rigId: demoIds.rig, code: 'clock-stepped' as const, subject: 'host' };
+  const found = { met: true, words: 'The clock of the server jumped by 1200 ms.', runId: runningId, utcMs: services.clock.utcMs() };
+  await services.database.db.transaction((tx) => reportCondition(tx, place, found));
+  alarmId = (await lab().server.as('viewer', 'GET', `/labs/${demoIds.lab}/alarms`).expect(200)).body.items[0].id;
 }, 120_000);
 
 const opened = (testId: string, sheet: string) => async (hand: Hand) => {
@@ -93,7 +100,11 @@ function places(): Place[] {
     { name: 'door-card', path: `${rig}/door`, arrives: 'door-screen' },
     { name: 'calendar', path: '/calendar', arrives: 'calendar-screen', first: async (hand) => void (await hand.reads('room')) },
     { name: 'schedule', path: '/calendar', arrives: 'calendar-screen', first: opened('schedule-a-run', 'schedule-confirm') },
-    { name: 'lab', path: '/lab', arrives: 'lab-screen' },
+    { name: 'lab', path: '/lab', arrives: 'lab-screen', first: async (hand) => void (await hand.reads('on-call', 'Whoever')) },
+    { name: 'on-call', path: '/lab', arrives: 'lab-screen', first: opened('change-on-call', 'on-call-sheet') },
+    { name: 'limit', path: rig, arrives: 'rig-screen', first: opened('add-limit', 'limit-sheet') },
+    { name: 'alarms', path: '/alarms', arrives: 'alarms-screen', first: async (hand) => void (await hand.reads('standing-alarms')) },
+    { name: 'alarm', path: `/alarms/${alarmId}`, arrives: 'alarm-screen', first: opened('shelve', 'reason-sheet') },
   ];
 }
 

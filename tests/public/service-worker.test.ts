@@ -18,6 +18,7 @@ type Answer = { status: number; of: string };
 class World {
   readonly kept = new Map<string, Map<string, Answer>>();
   readonly fetched: string[] = [];
+  readonly imported: string[] = [];
   answer: (url: string) => Promise<Answer> = (url) => Promise.resolve({ status: 200, of: `network ${url}` });
   private readonly listeners = new Map<string, (event: object) => void>();
   readonly routeOf: (asked: Asked, own: { origin: string; files: string[] }) => string | null;
@@ -54,6 +55,7 @@ class World {
     };
     const context = createContext({
       ...{ self, caches, URL, clearTimeout, setTimeout, fetch: fetching },
+      importScripts: (path: string) => void this.imported.push(path),
       ...{ Request: RequestLike, Response: { error: () => ({ status: 0, of: 'nothing' }) } },
     });
     const built = source.replace("{ version: 'unbuilt', files: [] }", JSON.stringify({ version, files }));
@@ -76,6 +78,10 @@ class World {
 }
 
 const away = () => Promise.reject(new TypeError('Failed to fetch'));
+
+test('what shows push messages comes with it', () => {
+  expect(new World().imported).toEqual(['/push-handler.js']);
+});
 
 test('no route of the API is ever touched, whatever its method, its words and the way it is asked', async () => {
   const world = new World();

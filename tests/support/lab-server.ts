@@ -42,8 +42,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
   webDir: null,
   smtpUrl: null,
   mailFrom: 'Evenfall <evenfall@quillfen.example>',
-  privateHosts: [],
-  logLevel: 'silent',
+  ...{ privateHosts: [], metricsPort: null, logLevel: 'silent' },
   limits: {
     requestsPerMinute: 1_000_000,
     interventionsPerMinute: 1_000_000,

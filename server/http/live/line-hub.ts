@@ -49,6 +49,11 @@ export class LineHub {
     this.keepBeating();
   }
 
+  /** How many pages follow a line. */
+  count(): number {
+    return this.readers.size;
+  }
+
   /** Something happened on a rig: everybody who looks at its line is told at once. */
   changed(rigId: string): void {
     for (const reader of this.readers) if (reader.rigId === rigId) this.tell(reader);

@@ -94,6 +94,11 @@ export class LiveHub {
     }
   }
 
+  /** How many pages follow a run. */
+  count(): number {
+    return this.readers.size;
+  }
+
   /** Sends what was just saved to everybody who follows the run. */
   changed(runId: string, change: LiveChange): void {
     this.recent.add(runId, change);

@@ -1,5 +1,7 @@
 import * as contracts from '@/shared/contracts/doors';
 import type { DoorCard } from '@/shared/contracts/doors';
+import { calleesOf } from '@/shared/alarms/rings';
+import { callMembersOf, callSettingsOf } from '@/server/store/calls';
 import * as store from '@/server/store/doors';
 import { findRig } from '@/server/store/rigs';
 import { activeRuns } from '@/server/store/runs-read';
@@ -26,12 +28,24 @@ async function standOf(services: Services, { labId, rigId }: store.DoorAtAddress
   return { state: services.locks.locksOf(rigId).length > 0 ? 'hands' : 'free', untilAt: null };
 }
 
+const namedAtMost = 3;
+
+async function onCallOf({ database: { db } }: Services, { labId, rigId }: store.DoorAtAddress): Promise<string[]> {
+  const run = (await activeRuns(db, labId)).get(rigId);
+  const callees = calleesOf(await callSettingsOf(db, labId), await callMembersOf(db, labId), run?.startedById ?? null);
+  return callees.slice(0, namedAtMost).map(({ name }) => name);
+}
+
 async function cardOf(services: Services, door: store.DoorAtAddress): Promise<DoorCard> {
   const { labId, labName, rigId, rigName, timeZone, ring } = door;
   const nowUtcMs = services.clock.utcMs();
   const span = { labId, timeZone, fromUtcMs: nowUtcMs, untilUtcMs: nowUtcMs + weekMs };
   const next = (await calendarOf(services.database.db, span)).find((item) => item.rigId === rigId && item.state === 'planned');
-  return { labName, rigName, timeZone, ring, ...(await standOf(services, door)), nextAt: next?.dueAt ?? null, serverAt: isoOf(nowUtcMs) };
+  return {
+    ...{ labName, rigName, timeZone, ring, ...(await standOf(services, door)), nextAt: next?.dueAt ?? null },
+    onCall: await onCallOf(services, door),
+    serverAt: isoOf(nowUtcMs),
+  };
 }
 
 export const doorRoutes = [

@@ -12,6 +12,7 @@ import { VirtualClock } from '@/server/engine/virtual-clock';
 import { AccessDirectory } from '@/server/http/access-directory';
 import { createApp } from '@/server/http/create-app';
 import { peopleRoutes } from '@/server/http/routes/people';
+import { AnswerCounts } from '@/server/http/metrics';
 import type { Services } from '@/server/http/services';
 import type { ServerConfig } from '@/server/interfaces/server-config';
 import { startDemoMailbox } from '@/server/notify/demo-mailbox';
@@ -52,6 +53,7 @@ export async function peopleApp(connection: Connection, changes: Partial<ServerC
     clock,
     log: pino({ level: 'silent' }),
     newId: randomUUID,
+    answers: new AnswerCounts(),
     newToken,
     sha256,
     database: connection,
@@ -108,6 +110,7 @@ const testConfig = (stateDir: string, changes: Partial<ServerConfig>): ServerCon
   smtpUrl: null,
   mailFrom: 'Evenfall <evenfall@quillfen.example>',
   privateHosts: [],
+  metricsPort: null,
   logLevel: 'silent',
   limits: { requestsPerMinute: 100_000, interventionsPerMinute: 1000, jsonBytes: 100_000, importBytes: 100_000, streamsPerUser: 6 },
   ...changes,

@@ -4,6 +4,7 @@ import * as z from 'zod';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import { createApp } from '@/server/http/create-app';
 import { mount, type MountedRoute } from '@/server/http/route-context';
+import { AnswerCounts } from '@/server/http/metrics';
 import type { Services } from '@/server/http/services';
 import type { IdempotencyAnswer, IdempotencyClaim, IdempotencyPort } from '@/server/interfaces/idempotency';
 import type { ServerConfig } from '@/server/interfaces/server-config';
@@ -54,6 +55,7 @@ export function appWith(routes: readonly MountedRoute[], config: Partial<ServerC
     clock: new VirtualClock(0, () => Promise.resolve()),
     log: pino({ level: 'info' }, { write: (line: string) => void logged.push(line) }),
     newId: () => 'a-request',
+    answers: new AnswerCounts(),
     sha256,
     databaseAwaySinceUtcMs: () => null,
     idempotency: keys,

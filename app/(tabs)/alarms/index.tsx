@@ -1,0 +1,5 @@
+import { AlarmsScreen } from '@/components/shell/lazy-screens';
+
+export default function Alarms() {
+  return <AlarmsScreen />;
+}

@@ -1,0 +1,45 @@
+import type { ChannelLimit } from '@/shared/alarms/limits';
+import { formatDuration } from '@/shared/lib/format-duration';
+
+/** A limit as it is typed. */
+export interface LimitDraft {
+  kind: ChannelLimit['kind'];
+  least: string;
+  greatest: string;
+  perH: string;
+  atMostS: string;
+  forS: string;
+  rings: ChannelLimit['rings'];
+}
+
+/** The limit that was typed; null while a number is missing or is none. */
+export function limitOf(draft: LimitDraft, read: (text: string) => number | null): ChannelLimit | null {
+  const { kind, rings } = draft;
+  const numberOr = (text: string) => (text.trim() === '' ? { ok: true, value: null } : { ok: read(text) !== null, value: read(text) });
+  if (kind === 'silence') {
+    const atMostS = read(draft.atMostS);
+    return atMostS === null ? null : { kind, atMostS, rings };
+  }
+  const forS = read(draft.forS);
+  if (forS === null) return null;
+  if (kind === 'slope') {
+    const greatestPerH = read(draft.perH);
+    return greatestPerH === null ? null : { kind, greatestPerH, windowS: 600, deadBand: 0.02, forS, rings };
+  }
+  const [least, greatest] = [numberOr(draft.least), numberOr(draft.greatest)];
+  if (!least.ok || !greatest.ok || (least.value === null && greatest.value === null)) return null;
+  return { kind, least: least.value, greatest: greatest.value, deadBand: 0.02, forS, rings };
+}
+
+export function limitWords(limit: ChannelLimit, unit: string): string {
+  switch (limit.kind) {
+    case 'level':
+      if (limit.least === null) return `not above ${String(limit.greatest)} ${unit}`;
+      if (limit.greatest === null) return `not below ${String(limit.least)} ${unit}`;
+      return `${String(limit.least)} to ${String(limit.greatest)} ${unit}`;
+    case 'slope':
+      return `at most ${String(limit.greatestPerH)} ${unit} an hour`;
+    case 'silence':
+      return `silent for at most ${formatDuration(limit.atMostS)}`;
+  }
+}

@@ -1,0 +1,194 @@
+import { chmod, cp, mkdir, mkdtemp, readdir, readFile, rename, rm, stat, writeFile } from 'node:fs/promises';
+import { basename, dirname, join, resolve } from 'node:path';
+import { sql } from 'drizzle-orm';
+import * as z from 'zod';
+import { connect, type Connection } from '@/db/connect';
+import { sha256Hex } from '../evaluation/sha256';
+import { auditHeads } from '../store/audit';
+import { otherConnections, tablesOf, wipe } from '../store/whole-database';
+import { headsFileName } from './audit-anchor';
+import { verifyLabAudit } from './audit-verify';
+import { ConfigError, readConfig } from './config';
+import { postgresProgram, postgresEnvironment, runProgram } from './programs';
+
+/**
+ * `npm run backup -- FILE` and `npm run restore -- FILE`: one file with the whole database (in PostgreSQL's own archive format) and the files
+ * of the state folder that no database holds: journals of runs and the heads of the audit chains. It opens with `tar`.
+ */
+
+const usage = { backup: 'Usage: npm run backup -- FILE', restore: 'Usage: npm run restore -- FILE [--replace]' } as const;
+const descriptionName = 'evenfall-backup.json';
+const dumpName = 'database.dump';
+const stateName = 'state';
+/** Of the state folder; all else there can be made again. */
+const keptOfState = ['journal', headsFileName];
+
+const descriptionSchema = z.object({
+  formatVersion: z.literal(1),
+  at: z.string(),
+  /** Rows of each table when the backup was made. */
+  rows: z.record(z.string(), z.number()),
+  /** SHA-256 (hex) of the dump. */
+  dump: z.string(),
+});
+
+export class UnusableBackup extends Error {
+  override readonly name = 'UnusableBackup';
+}
+
+export interface Place {
+  databaseUrl: string;
+  stateDir: string;
+}
+
+/** Writes the backup and returns how many rows it holds. An earlier file of that name is replaced only by a whole new one. */
+export async function backup(file: string, { databaseUrl, stateDir }: Place, nowUtcMs: number): Promise<number> {
+  const target = resolve(file);
+  const folder = await mkdtemp(join(dirname(target), `.${basename(target)}-`));
+  const connection = connect({ url: databaseUrl, maxConnections: 1, statementTimeoutMs: 600_000 });
+  try {
+    await chmod(folder, 0o700);
+    const rows = await dumpInto(join(folder, dumpName), connection, databaseUrl);
+    await keepState(stateDir, join(folder, stateName));
+    const dump = sha256Hex(await readFile(join(folder, dumpName)));
+    const description: z.infer<typeof descriptionSchema> = { formatVersion: 1, at: new Date(nowUtcMs).toISOString(), rows, dump };
+    await writeFile(join(folder, descriptionName), `${JSON.stringify(description, null, 2)}\n`);
+    const part = `${target}.part`;
+    await runProgram('tar', ['--create', '--gzip', `--file=${part}`, `--directory=${folder}`, descriptionName, dumpName, stateName], {});
+    await chmod(part, 0o600);
+    await rename(part, target);
+    return Object.values(rows).reduce((sum, count) => sum + count, 0);
+  } finally {
+    await connection.close();
+    await rm(folder, { recursive: true, force: true });
+  }
+}
+
+/** Dump and counts see the database at one and the same instant, whatever a server writes meanwhile. */
+function dumpInto(path: string, { db }: Connection, databaseUrl: string): Promise<Record<string, number>> {
+  return db.transaction(
+    async (tx) => {
+      const snapshot = (await tx.execute<{ id: string }>(sql`select pg_export_snapshot() as id`)).rows[0]?.id ?? '';
+      const options = ['--format=custom', '--no-owner', '--no-privileges', `--snapshot=${snapshot}`, `--file=${path}`];
+      await runProgram(postgresProgram('pg_dump'), options, postgresEnvironment(databaseUrl));
+      return Object.fromEntries(await tablesOf(tx));
+    },
+    { isolationLevel: 'repeatable read', accessMode: 'read only' },
+  );
+}
+
+async function keepState(stateDir: string, into: string): Promise<void> {
+  await mkdir(into, { recursive: true });
+  for (const name of keptOfState)
+    if (await isThere(join(stateDir, name))) await cp(join(stateDir, name), join(into, name), { recursive: true });
+}
+
+const isThere = (path: string): Promise<boolean> =>
+  stat(path).then(
+    () => true,
+    () => false,
+  );
+
+export interface Restored {
+  at: string;
+  labs: { name: string; entries: number }[];
+}
+
+/**
+ * Puts a backup in place of what the database and the state folder hold.
+ * @throws UnusableBackup when the file is none, a server still runs, or the database is not empty and `replace` was not asked for
+ */
+export async function restore(file: string, { databaseUrl, stateDir }: Place, { replace = false } = {}): Promise<Restored> {
+  const folder = await mkdtemp(join(dirname(resolve(file)), '.evenfall-restore-'));
+  const connection = connect({ url: databaseUrl, maxConnections: 1, statementTimeoutMs: 600_000 });
+  try {
+    await chmod(folder, 0o700);
+    const description = await unpack(resolve(file), folder);
+    if ((await otherConnections(connection.db)) > 0)
+      throw new UnusableBackup('something is connected to the database, a server of Evenfall most likely: end it first');
+    const before = await tablesOf(connection.db);
+    if (before.some(([, count]) => count > 0)) {
+      if (!replace)
+        throw new UnusableBackup(
+          'the database is not empty. With --replace everything in it is thrown away and the backup takes its place',
+        );
+    }
+    await wipe(connection.db);
+    const env = postgresEnvironment(databaseUrl);
+    const options = ['--no-owner', '--no-privileges', '--exit-on-error', '--single-transaction', `--dbname=${env.PGDATABASE ?? ''}`];
+    await runProgram(postgresProgram('pg_restore'), [...options, join(folder, dumpName)], env);
+    await putState(join(folder, stateName), stateDir);
+    return { at: description.at, labs: await checked(connection, description) };
+  } finally {
+    await connection.close();
+    await rm(folder, { recursive: true, force: true });
+  }
+}
+
+async function unpack(file: string, folder: string): Promise<z.infer<typeof descriptionSchema>> {
+  if (!(await isThere(file))) throw new UnusableBackup(`there is no file ${file}`);
+  try {
+    await runProgram('tar', ['--extract', '--gzip', '--no-same-owner', `--file=${file}`, `--directory=${folder}`], {});
+    const description = descriptionSchema.parse(JSON.parse(await readFile(join(folder, descriptionName), 'utf8')));
+    if (sha256Hex(await readFile(join(folder, dumpName))) === description.dump) return description;
+  } catch {
+    // Said below.
+  }
+  throw new UnusableBackup(`${file} is no whole backup of Evenfall`);
+}
+
+async function putState(from: string, stateDir: string): Promise<void> {
+  await mkdir(stateDir, { recursive: true });
+  for (const name of keptOfState) await rm(join(stateDir, name), { recursive: true, force: true });
+  for (const name of await readdir(from)) await cp(join(from, name), join(stateDir, name), { recursive: true });
+}
+
+/** What was restored is what was kept: as many rows in each table, and every audit chain whole. */
+async function checked({ db }: Connection, { rows }: z.infer<typeof descriptionSchema>): Promise<Restored['labs']> {
+  const now = new Map(await tablesOf(db));
+  const lost = Object.entries(rows).filter(([table, count]) => now.get(table) !== count);
+  if (lost.length > 0) throw new UnusableBackup(`not all rows came back: ${lost.map(([table]) => table).join(', ')}`);
+  const labs: Restored['labs'] = [];
+  for (const lab of await auditHeads(db)) {
+    const { entries, why } = await verifyLabAudit(db, lab);
+    if (why !== null) throw new UnusableBackup(`the audit chain of ${lab.name} is broken in this backup: ${why}`);
+    labs.push({ name: lab.name, entries });
+  }
+  return labs;
+}
+
+export interface Output {
+  out: (text: string) => void;
+  err: (text: string) => void;
+}
+const toProcess: Output = { out: (text) => process.stdout.write(text), err: (text) => process.stderr.write(text) };
+
+/** The commands; 0, or 2 and a sentence. */
+export async function main(
+  args: readonly string[],
+  environment: Record<string, string | undefined>,
+  { output = toProcess, nowUtcMs = Date.now() }: { output?: Output; nowUtcMs?: number } = {},
+): Promise<number> {
+  const [act, ...rest] = args;
+  const files = rest.filter((arg) => !arg.startsWith('--'));
+  const [file] = files;
+  const unknown = rest.find((arg) => arg.startsWith('--') && !(act === 'restore' && arg === '--replace'));
+  if ((act !== 'backup' && act !== 'restore') || file === undefined || files.length > 1 || unknown !== undefined) {
+    output.err(`${act === 'restore' ? usage.restore : usage.backup}\n`);
+    return 2;
+  }
+  try {
+    const place = readConfig(environment);
+    if (act === 'backup') {
+      const rows = await backup(file, place, nowUtcMs);
+      output.out(`${JSON.stringify({ file: resolve(file), rows })}\n`);
+    } else output.out(`${JSON.stringify(await restore(file, place, { replace: rest.includes('--replace') }), null, 2)}\n`);
+    return 0;
+  } catch (error) {
+    if (!(error instanceof UnusableBackup) && !(error instanceof ConfigError)) throw error;
+    output.err(`${act}: ${error.message}\n`);
+    return 2;
+  }
+}
+
+if (require.main === module) void main(process.argv.slice(2), process.env).then((code) => (process.exitCode = code));

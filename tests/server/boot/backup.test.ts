@@ -1,0 +1,87 @@
+import { mkdirSync, mkdtempSync, readFileSync, rmSync, statSync, writeFileSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { sql } from 'drizzle-orm';
+import { demoIds, seedDemo } from '@/db/demo/seed';
+import { connect } from '@/db/connect';
+import { anchorAudit } from '@/server/boot/audit-anchor';
+import { main, type Restored } from '@/server/boot/backup';
+import { main as verifyAudit } from '@/server/boot/audit-verify';
+import { createSampleStore } from '@/server/store/sample-store';
+import { tablesOf } from '@/server/store/whole-database';
+import { freshDatabase, type TestDatabase } from '@/tests/support/database';
+import { sha256 } from '../store/rows';
+
+/** A lab is kept, lost, and put back from one file. */
+
+jest.setTimeout(120_000);
+const nowUtcMs = Date.parse('2031-02-14T20:00:00Z');
+const folder = mkdtempSync(join(tmpdir(), 'evenfall-backup-'));
+const file = join(folder, 'lab.tar.gz');
+const states = { lab: join(folder, 'state'), other: join(folder, 'other-state') };
+let lab: TestDatabase;
+let other: TestDatabase;
+beforeAll(async () => {
+  [lab, other] = [await freshDatabase(), await freshDatabase()];
+  await seedDemo(lab.connection, { nowUtcMs, hashPassword: async () => 'none', sha256 });
+  const utcMs = Float64Array.from({ length: 500 }, (_, index) => nowUtcMs + 100 * index);
+  const { rows } = await lab.connection.db.execute<{ id: string }>(sql`select id from channels limit 1`);
+  const value = utcMs.map(Math.sin);
+  await createSampleStore(lab.connection).append(demoIds.lab, rows[0]?.id ?? '', { utcMs, value });
+  mkdirSync(join(states.lab, 'journal'), { recursive: true });
+  writeFileSync(join(states.lab, 'journal', 'run.jsonl'), '{"version":1}\n');
+  writeFileSync(join(states.lab, 'made-again'), 'not worth keeping');
+  await anchorAudit(lab.connection.db, { stateDir: states.lab, nowUtcMs });
+});
+afterAll(async () => {
+  await lab.drop();
+  await other.drop();
+  rmSync(folder, { recursive: true });
+});
+
+async function run(database: TestDatabase, stateDir: string, ...args: string[]) {
+  const said = { out: '', err: '' };
+  const output = { out: (text: string) => void (said.out += text), err: (text: string) => void (said.err += text) };
+  const code = await main(args, { DATABASE_URL: database.url, EVENFALL_STATE_DIR: stateDir }, { output, nowUtcMs });
+  return { code, ...said };
+}
+
+test('a backup is one file for its owner alone', async () => {
+  expect(await run(lab, states.lab, 'backup', file)).toMatchObject({ code: 0, err: '' });
+  expect(statSync(file).mode & 0o777).toBe(0o600);
+  expect(await run(lab, states.lab, 'backup')).toMatchObject({ code: 2, err: expect.stringContaining('Usage') });
+});
+
+test('it is put back into an empty database: every row, the journals and heads, the audit chain whole', async () => {
+  const before = await tablesOf(lab.connection.db);
+  const server = connect({ url: other.url, maxConnections: 1 });
+  await server.db.execute(sql`select 1`);
+  expect(await run(other, states.other, 'restore', file)).toMatchObject({ code: 2, err: expect.stringMatching(/connected/) });
+  await server.close();
+  const restored = await run(other, states.other, 'restore', file);
+  expect(restored).toMatchObject({ code: 0, err: '' });
+  expect((JSON.parse(restored.out) as Restored).labs).toEqual([{ name: 'Quillfen Gravity Laboratory', entries: 1 }]);
+  const again = connect({ url: other.url, maxConnections: 1 });
+  expect(await tablesOf(again.db)).toEqual(before);
+  const sums = sql`select count(*)::int as count, sum(value) as sum from samples`;
+  expect((await again.db.execute(sums)).rows).toEqual((await lab.connection.db.execute(sums)).rows);
+  await expect(again.db.execute(sql`delete from audit`)).rejects.toMatchObject({
+    cause: { message: expect.stringContaining('never changed') },
+  });
+  await again.close();
+  expect(readFileSync(join(states.other, 'journal', 'run.jsonl'), 'utf8')).toBe('{"version":1}\n');
+  expect(() => statSync(join(states.other, 'made-again'))).toThrow();
+  const silent = { out: () => undefined, err: () => undefined };
+  expect(await verifyAudit({ DATABASE_URL: other.url, EVENFALL_STATE_DIR: states.other }, silent)).toBe(0);
+});
+
+test('a database with something in it is not thrown away by mistake, and a spoilt file changes nothing', async () => {
+  expect(await run(other, states.other, 'restore', file)).toMatchObject({ code: 2, err: expect.stringMatching(/not empty.*--replace/) });
+  const bytes = readFileSync(file);
+  writeFileSync(join(folder, 'cut.tar.gz'), bytes.subarray(0, bytes.length / 2));
+  for (const name of ['cut.tar.gz', 'missing.tar.gz'])
+    expect(await run(other, states.other, 'restore', join(folder, name), '--replace')).toMatchObject({ code: 2 });
+  const again = connect({ url: other.url, maxConnections: 1 });
+  expect(new Map(await tablesOf(again.db)).get('users')).toBe(5);
+  await again.close();
+});
