@@ -140,6 +140,7 @@ export function useLab(): MembershipView {
 const rolesInWords: Record<Act, string> = {
   'members.manage': 'Only an owner may manage members.',
   'lab.settings': 'Only an owner may change the settings of the lab.',
+  'tokens.manage': 'Only an owner may make and revoke device tokens.',
   'rig.edit': 'Only a keeper or an owner may change a rig.',
   'rig.arm': 'Only an operator, a keeper or an owner may arm a rig.',
   'cautions.sign': 'Only an operator, a keeper or an owner signs the cautions of a rig.',
@@ -148,6 +149,7 @@ const rolesInWords: Record<Act, string> = {
   'protocol.write': 'Only an operator, a keeper or an owner may write and issue protocols.',
   'run.start': 'Only an operator, a keeper or an owner may start a run.',
   'run.resume': 'Only an operator, a keeper or an owner may resume a run.',
+  'prompt.confirm': 'Only an operator, a keeper or an owner may confirm a prompt.',
   'run.hold': 'Every member may hold a run.',
   'run.stop': 'Every member may stop a run.',
   'alarm.acknowledge': 'Only an analyst, an operator, a keeper or an owner may acknowledge an alarm.',

@@ -4,6 +4,7 @@ import { acts, roles, type Act, type Role } from '@/shared/contracts/roles';
 const actWords: Record<Act, string> = {
   'members.manage': 'Manage members and invitations',
   'lab.settings': 'Change the settings of the lab',
+  'tokens.manage': 'Make and revoke device tokens',
   'rig.edit': 'Change a rig, its link and its mass sets',
   'rig.arm': 'Arm a rig on site',
   'cautions.sign': 'Sign the cautions of a rig',
@@ -12,6 +13,7 @@ const actWords: Record<Act, string> = {
   'protocol.write': 'Write and issue protocols, rehearse',
   'run.start': 'Start a run',
   'run.resume': 'Resume a run',
+  'prompt.confirm': 'Confirm a prompt',
   'run.hold': 'Hold a run',
   'run.stop': 'Stop a run',
   'alarm.acknowledge': 'Acknowledge an alarm, and say that its answer is done',

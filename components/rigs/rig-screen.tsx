@@ -7,6 +7,7 @@ import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, Secti
 import type { RigView } from '@/shared/contracts/rigs';
 import { ArmPanel } from './arm-panel';
 import { ChannelLimits } from './channel-limits';
+import { DevicesPanel } from './devices-panel';
 import { linkState } from './link-words';
 import { LinkPanel } from './link-panel';
 import { LiveFacts } from './live-facts';
@@ -64,6 +65,7 @@ export function RigScreen() {
       <ArmPanel rig={rig} />
       <LockPanel rig={rig} />
       <LinkPanel rig={rig} />
+      <DevicesPanel rig={rig} />
     </Screen>
   );
 }

@@ -18,6 +18,7 @@ import { toRad } from './deflection-series';
 import { DownloadLink } from './download-link';
 import { stagesOf } from './intervention';
 import { InterventionStages } from './intervention-stages';
+import { PairsPanel } from './pairs-panel';
 import { TextLink } from './recent-steps';
 import { outcomeTitle, stateMark } from './run-words';
 
@@ -49,6 +50,7 @@ export function ResultScreen({ view }: { view: RunView }) {
         />
       )}
       <Figures view={view} rows={steps.data?.data.items ?? null} result={result} />
+      <PairsPanel runId={view.id} rows={rows} timeZone={timeZone} />
       <Links runId={view.id} />
       <View className="flex-row flex-wrap items-center gap-3">
         <DownloadLink

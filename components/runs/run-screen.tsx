@@ -21,6 +21,7 @@ import { isOver } from './run-words';
 import { useIntervention } from './use-intervention';
 import { useLiveRun, type LiveRun } from './use-live-run';
 import { useNow } from './use-now';
+import { ReachedPanel, WaitingPanel } from './waiting-panel';
 import { useRunStrip } from './use-run-strip';
 
 const back = { href: '/runs' as Href, label: 'Runs' };
@@ -92,7 +93,9 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
       <LostNotice age={age} />
       <SlipNotice view={view} timeZone={timeZone} />
       <HeldNotice view={view} timeZone={timeZone} serverNowMs={serverNowMs} />
+      <WaitingPanel view={view} timeZone={timeZone} serverNowMs={serverNowMs} />
       <LiveStrip strip={strip} timeZone={timeZone} serverNowMs={serverNowMs} title={`${view.rigName}, ${view.protocolName}`} lost={lost} />
+      <ReachedPanel view={view} />
       <AfterDwell view={view} timeZone={timeZone} serverNowMs={serverNowMs} onTap={() => tap('hold-after-dwell')} />
       {wide ? null : plan}
       {wide ? null : log}

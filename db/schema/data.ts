@@ -23,6 +23,8 @@ export const channels = pgTable(
     unit: text('unit').notNull(),
     role: text('role', { enum: ['deflection', 'environment', 'turntable'] }).notNull(),
     source: text('source', { enum: ['simulated', 'import', 'stream'] }).notNull(),
+    /** Samples a second that are to be expected of a stream; null where nothing is. */
+    rateHz: doublePrecision('rate_hz'),
     createdAt: instant('created_at').notNull(),
   },
   (table) => [
@@ -35,6 +37,34 @@ export const channels = pgTable(
     uniqueIndex('channels_name_of_run')
       .on(table.labId, table.runId, table.name)
       .where(sql`${table.runId} is not null`),
+  ],
+);
+
+/** What a device (a camera tracker, a sensor board) signs its samples with: it can append to the channels named, and nothing else. */
+export const deviceTokens = pgTable(
+  'device_tokens',
+  {
+    labId: key('lab_id').notNull(),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
+    rigId: key('rig_id').notNull(),
+    /** The device, in the words of whoever made the token. */
+    name: text('name').notNull(),
+    tokenHash: text('token_hash').notNull(),
+    /** Names of channels of the rig. */
+    channels: json('channels').$type<string[]>().notNull(),
+    madeAt: instant('made_at').notNull(),
+    madeBy: text('made_by').notNull(),
+    lastUsedAt: instant('last_used_at'),
+    revokedAt: instant('revoked_at'),
+    revokedBy: text('revoked_by'),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.id] }),
+    foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
+    uniqueIndex('device_tokens_hash').on(table.tokenHash),
+    index('device_tokens_rig').on(table.labId, table.rigId),
   ],
 );
 

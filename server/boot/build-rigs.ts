@@ -12,6 +12,7 @@ import { RigSupervisor, type SupervisorParts } from '../engine/rig-supervisor';
 import { DATABASE_GRACE_MS } from '../engine/run-saver';
 import { sha256Hex } from '../evaluation/sha256';
 import type { RigStation } from '../interfaces/rig-stations';
+import type { SampleReader } from '../interfaces/sample-reader';
 import type { SampleStore } from '../interfaces/sample-store';
 import type { LinkEvent } from '../interfaces/turntable-link';
 import { createRunStore } from '../store/run-store';
@@ -32,6 +33,7 @@ export interface RigSideWiring {
   log: Logger;
   background: Background;
   samples: SampleStore;
+  samplesOf(rigId: string): SampleReader;
   onLine(rigId: string): void;
   /** A rig that another process drove is this one's now. */
   onTaken(rig: RigKey): void;
@@ -57,13 +59,13 @@ export interface RigSide {
 
 /** All that has to do with the rigs: who may move them, their lines, and the engine that drives runs. */
 export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide {
-  const { log, background, samples, onLine, onTaken, onDatabase } = wiring;
+  const { log, background, samples, samplesOf, onLine, onTaken, onDatabase } = wiring;
   const { engineDatabase: database = parts.database, clock, overrides = {} } = parts;
   const { arms, arming, locks } = buildStanding(parts, {
     ...{ log, background, onLine },
     stationOf: (rigId) => stations.get(rigId),
     supervisor: () => supervisor,
-    guided: () => guided,
+    guided: (): GuidedMoves => guided,
   });
   const leases = new LeaseKeeper({
     ...{ database, clock, log, onTaken },
@@ -94,17 +96,11 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     whyDisarmed: (rigId) => arms.endedOf(rigId)?.why ?? '',
     lockedBy: (rigId) => locks.lockedBy(rigId),
     guidedBy: (rigId) => guided.takenBy(rigId),
+    samplesOf,
     perform: performing(arms, wiring),
   });
 
-  const guided: GuidedMoves = new GuidedMoves({
-    ...{ clock, linkOf },
-    armOf: (rigId) => arms.armOf(rigId),
-    takenBy: (rigId) => supervisor.takenBy(rigId),
-    lockedBy: (rigId) => locks.lockedBy(rigId),
-    endArm: (rig, why, by) => arms.end(rig, why, by),
-    onChange: onLine,
-  });
+  const guided = buildGuided({ clock, linkOf, arms, locks, onLine, supervisor });
   const heed = heedLinks({ arms, arming, guided, soak }, wiring, () => clock.utcMs());
 
   /** Two drivers on one rig would be worse than none. */
@@ -115,6 +111,25 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
   }
 
   return { arms, arming, locks, leases, stations, supervisor, guided, apparatus, soak };
+}
+
+function buildGuided(parts: {
+  clock: BuildParts['clock'];
+  linkOf: (rigId: string) => RigStation['link'] | null;
+  arms: RigSide['arms'];
+  locks: RigSide['locks'];
+  onLine: (rigId: string) => void;
+  supervisor: RigSupervisor;
+}): GuidedMoves {
+  const { clock, linkOf, arms, locks, onLine, supervisor } = parts;
+  return new GuidedMoves({
+    ...{ clock, linkOf },
+    armOf: (rigId) => arms.armOf(rigId),
+    takenBy: (rigId) => supervisor.takenBy(rigId),
+    lockedBy: (rigId) => locks.lockedBy(rigId),
+    endArm: (rig, why, by) => arms.end(rig, why, by),
+    onChange: onLine,
+  });
 }
 
 /** What each line tells: whatever lets people or surprises into the room, or loses the position, ends the arm, run or no run. */

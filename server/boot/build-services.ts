@@ -14,6 +14,8 @@ import { AlarmWatch } from '../http/work/alarm-watch';
 import { workEvaluation } from '../http/work/evaluation-job';
 import { rehearsalJobKind, workRehearsal } from '../http/work/rehearsal-job';
 import { tellStarter } from '../http/work/tell-starter';
+import { AppendRates } from '../ingest/append-rate';
+import { RecentSamples } from '../ingest/recent-samples';
 import type { MailPort } from '../interfaces/mail';
 import type { StationRig } from '../interfaces/rig-stations';
 import { alarmJobs } from '../notify/alarm-jobs';
@@ -59,25 +61,27 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   let awaySinceUtcMs: number | null = null;
   const nowUtcMs = () => clock.utcMs();
   const samples = createSampleStore(database);
+  const recent = new RecentSamples();
   const sessions = createSessions({ db: database.db, clock, newToken, sha256: sha256Hex });
   const { arms, arming, locks, leases, stations, supervisor, guided, apparatus, soak } = buildRigSide(parts, {
     ...{ log, background, samples },
+    samplesOf: (rigId) => recent.readerOf(rigId),
     onLine: (rigId) => lines.changed(rigId),
     onTaken: (rig) => background.add(taking.takenOver(rig), 'taking a rig over'),
     onDatabase: (sinceUtcMs) => watch.noteDatabase((awaySinceUtcMs = sinceUtcMs)),
     onNotice: (start, notice) => tellStarter(services, start, notice),
     onLinkEvent: (station, event, wasArmed) => watch.heard(station, event, wasArmed),
   });
-  const live = new LiveHub({ source: liveSourceOf(() => services), clock, streamsPerUser: config.limits.streamsPerUser });
-  const lines = buildLines(parts, () => services);
+  const { live, lines } = buildHubs(parts, () => services);
   const access = new AccessDirectory({ source: accessSource(database.db, nowUtcMs), sessions, clock, sha256: sha256Hex });
   const workers = overrides.tasks === undefined ? createWorkerTasks() : null;
   const takenUp = openPromise();
   const services: Services = {
     ...{ clock, log, database, sessions, access, samples, stations, arms, arming, locks, supervisor, guided, soak, live, lines, newToken },
-    config: { ...config, limits: { ...config.limits } },
-    ...{ newId: randomUUID, sha256: sha256Hex },
+    config: { ...config, limits: { ...config.limits }, devices: { ...config.devices } },
+    ...{ newId: randomUUID, sha256: sha256Hex, arrived: arrival(recent, live) },
     ...{ reviews: new Reviews({ clock, newToken }), answers: new AnswerCounts() },
+    appendRates: new AppendRates(clock, () => services.config.devices),
     idempotency: createIdempotency(database.db, nowUtcMs),
     ...buildTelling(parts, () => services.config.port),
     activeRuns: new ActiveRuns({ supervisor, live }),
@@ -97,8 +101,8 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     live.endAccess(ended);
     lines.endAccess(ended);
   });
-  stations.onSamples(({ rigId, channelId, channel, unit, utcMs, value }) =>
-    live.sampled(rigId, { channelId, channel, unit, utcMs: [...utcMs], value: [...value] }),
+  stations.onSamples(({ rigId, channel, utcMs, value, ...facts }) =>
+    services.arrived(rigId, { ...facts, name: channel, role: 'deflection' }, { utcMs, value }),
   );
   return {
     services,
@@ -111,16 +115,6 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   };
 }
 
-/** The lines of the rigs as pages follow them. */
-function buildLines({ clock, config }: BuildParts, services: () => Services): LineHub {
-  return new LineHub({
-    clock,
-    lineOf: (rig) => lineOf(services(), rig),
-    mayStillRead: (reader, labId) => mayStillRead(services(), reader, labId),
-    streamsPerUser: config.limits.streamsPerUser,
-  });
-}
-
 /** How people and watchers are reached. */
 function buildTelling({ database: { db }, clock, config, overrides = {} }: BuildParts, port: () => number) {
   const nowUtcMs = () => clock.utcMs();
@@ -131,6 +125,26 @@ function buildTelling({ database: { db }, clock, config, overrides = {} }: Build
   const subject = config.publicUrl?.startsWith('https:') === true ? config.publicUrl : `mailto:${address}`;
   const push = overrides.push ?? createWebPush({ db, outgoing, subject, nowUtcMs });
   return { mail, push, outgoing, tell: { db, clock, mail, push, origin } };
+}
+
+/** What follows runs and lines live. */
+function buildHubs({ clock, config }: BuildParts, services: () => Services): Pick<Services, 'live' | 'lines'> {
+  const { streamsPerUser } = config.limits;
+  const live = new LiveHub({ source: liveSourceOf(services), clock, streamsPerUser });
+  const lines = new LineHub({
+    ...{ clock, streamsPerUser },
+    lineOf: (rig) => lineOf(services(), rig),
+    mayStillRead: (reader, labId) => mayStillRead(services(), reader, labId),
+  });
+  return { live, lines };
+}
+
+/** Where samples go that have just come, besides the database. */
+function arrival(recent: RecentSamples, live: LiveHub): Services['arrived'] {
+  return (rigId, { channelId, name, unit, role, rateHz }, { utcMs, value }) => {
+    recent.add(rigId, { name, unit, role, rateHz }, { utcMs, value });
+    live.sampled(rigId, { channelId, channel: name, unit, utcMs: [...utcMs], value: [...value] });
+  };
 }
 
 /** Workers of this process: mails do not wait behind a rehearsal. */

@@ -86,5 +86,6 @@ export function readConfig(environment: Record<string, string | undefined>): Ser
       importBytes: env.EVENFALL_IMPORT_MIB * 1_048_576,
       streamsPerUser: 6,
     },
+    devices: { batchBytes: 1_048_576, batchesPerMinute: 120, samplesPerMinute: 120_000 },
   };
 }

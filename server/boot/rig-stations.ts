@@ -15,7 +15,7 @@ import { tryLink } from '../links/try-link';
 import { findOrMakeChannel } from '../store/imports';
 import type { Connection } from '../store/database';
 import { SampleSink } from './sample-sink';
-import type { SimulatedApparatus } from './simulated-apparatus';
+import { simulatedRateHz, type SimulatedApparatus } from './simulated-apparatus';
 
 export interface StationsParts {
   database: Connection;
@@ -149,6 +149,7 @@ export class ServerRigStations implements RigStations {
       unit: 'rad',
       role: 'deflection' as const,
       source: 'simulated' as const,
+      rateHz: simulatedRateHz,
       createdAt: this.parts.clock.utcMs(),
     };
     const channel = await findOrMakeChannel(this.parts.database.db, wanted);
@@ -164,7 +165,14 @@ export class ServerRigStations implements RigStations {
       (batch) => {
         sink.add(batch);
         for (const listener of this.listeners)
-          listener({ rigId: station.rigId, channelId: channel.id, channel: channel.name, unit: channel.unit, ...batch });
+          listener({
+            rigId: station.rigId,
+            channelId: channel.id,
+            channel: channel.name,
+            unit: channel.unit,
+            rateHz: simulatedRateHz,
+            ...batch,
+          });
       },
       {
         positionKnown: () => station.link.controller()?.positionKnown ?? true,

@@ -21,7 +21,7 @@ export interface ApparatusParts {
   controller?: SimulatedController;
 }
 
-const rateHz = 10;
+export const simulatedRateHz = 10;
 
 /** A simulated rig: the turntable's controller and the pendulum that its true angle drives, also between runs. */
 export class SimulatedApparatus {
@@ -99,7 +99,7 @@ export class SimulatedApparatus {
       rig: document,
       bigG: CODATA_2022_G.value,
       seed,
-      rateHz,
+      rateHz: simulatedRateHz,
       startUtcMs: nowUtcMs,
       startDeg: this.controller.trueAngleDegAt(nowUtcMs),
     });

@@ -1,7 +1,23 @@
 import { initialTransition, transition } from 'xstate';
 import type { RunStart } from '@/shared/archive/run-records';
 import { explainStartRefusal, newContext, noteBeginning, startRefusal, startRun } from './beginning';
+import {
+  confirmByItself,
+  confirmPrompt,
+  confirmRefusal,
+  endGivenUp,
+  endMet,
+  givesUp,
+  isMet,
+  isPrompt,
+  lookForEnd,
+  noteDoor,
+  noteLook,
+  policyOfWait,
+  refuseConfirm,
+} from './awaiting';
 import { nothingOut } from './draft';
+import { noteDwellLook } from './dwells';
 import {
   awaitReturn,
   becomeFailed,
@@ -25,7 +41,7 @@ import { noteReady, noteReset, noteStandstill, noteStrangeMotion } from './obser
 import { type Advance, CHART_VERSION, type ChartState, type RunContext, type RunEvent, type RunSnapshot } from './run-context';
 import { askAgain, dropAhead, expectEnd, finishMotion, noteBegan, noteEnded, takeAhead } from './motions';
 import { slipFoundHoming } from './position';
-import { chooseNext, endStanding, sendAhead } from './steps';
+import { chooseNext, endStanding, lookBeforeEnd, lookIsDue, sendAhead } from './steps';
 import {
   act,
   bootedAnew,
@@ -94,8 +110,10 @@ const machine = chart.createMachine({
         { guard: ({ context }) => context.run.next === 'homing', target: 'homing' },
         { guard: ({ context }) => context.run.next === 'moving', target: 'moving' },
         { guard: ({ context }) => context.run.next === 'standing', target: 'standing' },
+        { guard: ({ context }) => context.run.next === 'awaiting', target: 'awaiting' },
         { guard: ({ context }) => context.run.next === 'finished', target: 'finished' },
         { guard: ({ context }) => context.run.next === 'holding', target: 'holding', actions: act(beginHold) },
+        { guard: ({ context }) => context.run.next === 'stopping', target: 'stopping', actions: act(beginStop) },
         { target: 'failed' },
       ],
     },
@@ -142,10 +160,41 @@ const machine = chart.createMachine({
           { guard: isAhead, actions: act(dropAhead) },
         ],
         'link.refused': refusals(isAhead, dropAhead),
+        looked: { actions: act(noteDwellLook) },
         deadline: [
           { guard: isOverdue, ...holdsFor('no-answer', 'The controller accepted the move and never told that it began.') },
           { guard: isOver, target: 'choosing', actions: act(endStanding, chooseNext) },
+          { guard: when(lookIsDue), actions: act(lookBeforeEnd) },
           { actions: act(sendAhead) },
+        ],
+      },
+    },
+    /** Until it is calm, until a channel is quiet, until a person has confirmed. */
+    awaiting: {
+      on: {
+        ...underWay,
+        skip: skips,
+        'link.motion-began': strangeMotion,
+        'link.interlock': [{ guard: when(isPrompt), actions: act(noteDoor) }, ...underWay['link.interlock']],
+        looked: [{ guard: when(isMet), target: 'choosing', actions: act(endMet, chooseNext) }, { actions: act(noteLook) }],
+        'confirm-prompt': [
+          { guard: when((draft) => confirmRefusal(draft) === null), target: 'choosing', actions: act(confirmPrompt, chooseNext) },
+          { actions: act(refuseConfirm) },
+        ],
+        deadline: [
+          {
+            guard: when((draft) => givesUp(draft) && policyOfWait(draft) === 'continue'),
+            target: 'choosing',
+            actions: act(endGivenUp, chooseNext),
+          },
+          {
+            guard: when((draft) => givesUp(draft) && policyOfWait(draft) === 'stop'),
+            target: 'stopping',
+            actions: act(endGivenUp, beginStop),
+          },
+          { guard: when(givesUp), target: 'holding', actions: act(endGivenUp, beginHold) },
+          { guard: when(isPrompt), target: 'choosing', actions: act(confirmByItself, chooseNext) },
+          { actions: act(lookForEnd) },
         ],
       },
     },

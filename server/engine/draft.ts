@@ -1,7 +1,8 @@
 import type { RunStart, StepOutcome, StepRow } from '@/shared/archive/run-records';
 import type { Instant } from '../interfaces/clock';
 import type { LinkCommand } from '../interfaces/turntable-link';
-import { noteDwellDone } from './pairs';
+import { noteVerdict } from './verdict';
+import type { Look } from './look';
 import { noteRowClosed } from './position';
 import type {
   ActiveStep,
@@ -99,6 +100,10 @@ export class Draft {
     this.out.effects.push({ kind: 'notify', id: this.nextId(), topic, text });
   }
 
+  look(look: Look): void {
+    this.out.effects.push({ kind: 'look', id: this.nextId(), look });
+  }
+
   voidArm(reason: string): void {
     this.context.armVoid = reason;
     this.out.effects.push({ kind: 'void-arm', id: this.nextId(), reason });
@@ -131,11 +136,7 @@ export class Draft {
     const { step } = this.context;
     if (step === null || step.row.outcome !== null) return;
     Object.assign(step.row, { endUtcMs: at.utcMs, uEndS: at.uS, angleEndDeg: angleDeg, outcome });
-    if (step.row.kind === 'dwell') step.row.good = true;
-    if (step.row.kind === 'dwell' && outcome === 'done') {
-      this.context.dwellsDone += 1;
-      noteDwellDone(this, step.row);
-    }
+    if (step.row.kind === 'dwell') noteVerdict(this, step.row);
     step.broken = outcome === 'cut short';
     noteRowClosed(this, step.row, step.motion !== null);
     this.saveRow(step.row);

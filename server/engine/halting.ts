@@ -5,8 +5,10 @@ import type { InterruptionCause, KnownController, RunEvent } from './run-context
 import { finishMotion, reachedTarget, takeAhead, untoldEdge } from './motions';
 import { slipRefusal } from './position';
 import { predictEndUtcMs } from './predicted-end';
-import { beginHome, beginStanding, beginSwing, chooseNext, standingEndUtcMs, toleranceDeg } from './steps';
-import { CONFIRM_MS, GAP_LIMIT_MS, LEAD_MS } from './timing';
+import { awaits, beginAwaiting } from './awaiting';
+import { toleranceDeg } from './rows';
+import { beginHome, beginStanding, beginSwing, chooseNext, firstLeadMs, standingEndUtcMs } from './steps';
+import { CONFIRM_MS, GAP_LIMIT_MS } from './timing';
 
 /** How a run comes to rest and how it goes on: holds, stops, interruptions, resuming. */
 
@@ -199,8 +201,13 @@ export function carryOn(draft: Draft): void {
   context.reason = null;
   context.ahead = null;
   if (step === null) return resumeStep(draft);
+  if (awaits(step)) {
+    context.deadlineUtcMs = draft.nowUtcMs;
+    context.next = 'awaiting';
+    return;
+  }
   if (step.motion === null) {
-    context.deadlineUtcMs = Math.max(draft.nowUtcMs, standingEndUtcMs(step) - LEAD_MS);
+    context.deadlineUtcMs = Math.max(draft.nowUtcMs, standingEndUtcMs(step) - firstLeadMs(step.row.kind));
     context.next = 'standing';
     return;
   }
@@ -239,6 +246,7 @@ function resumeStep(draft: Draft): void {
   if (context.startedAtUtcMs === null) return startRun(draft);
   if (step === null || !step.broken) return chooseNext(draft);
   if (step.row.kind === 'home') return beginHome(draft, step.item);
+  if (awaits(step)) return beginAwaiting(draft, step.item);
   // A dwell or settle lasts as long as first planned; a wait ends at its time of day, however long it was held.
   if (step.motion === null) return beginStanding(draft, step.item, step.row.kind === 'wait' ? null : step.plannedMs);
   beginSwing(draft, { item: step.item, late: true });
@@ -283,7 +291,8 @@ function closeStanding(draft: Draft, angleDeg: number | null): void {
   if (context.step === null) return;
   const endUtcMs = standingEndUtcMs(context.step);
   const haltedAtUtcMs = context.haltedAtUtcMs ?? draft.nowUtcMs;
-  const over = haltedAtUtcMs >= endUtcMs;
+  const over = haltedAtUtcMs >= endUtcMs && !awaits(context.step);
+  context.waiting = null;
   const at: Instant = { utcMs: over ? endUtcMs : haltedAtUtcMs, uS: context.uPlanS };
   draft.closeRow({ at, angleDeg: angleDeg ?? context.step.row.angleStartDeg, outcome: over ? 'done' : 'cut short' });
   if (over) context.step = null;

@@ -6,7 +6,9 @@ import type { MotionSent } from '../interfaces/turntable-link';
 import type { Draft } from './draft';
 import type { RunSnapshot } from './run-context';
 import { forgetPosition, noteHomed } from './position';
-import { endStanding, openSwing, sendMove, standingEndUtcMs, toleranceDeg, writeMark } from './steps';
+import { cursorMoment } from './dwells';
+import { toleranceDeg } from './rows';
+import { endStanding, openSwing, sendMove, standingEndUtcMs, writeMark } from './steps';
 import { LATE_MS, MOTION_GRACE_MS } from './timing';
 
 /** How a motion is followed: begun, refused, ended, finished. */
@@ -23,7 +25,8 @@ export function takeAhead(draft: Draft): void {
   context.step = null;
   context.ahead = null;
   for (;;) {
-    const { item, cursor } = advanceCursor(draft.start, context.cursor, context.moment);
+    const { item, cursor } = advanceCursor(draft.start, context.cursor, cursorMoment(draft));
+    context.dwellJustNotGood = false;
     if (item === null) return;
     context.cursor = cursor;
     if (item.step.kind === 'swing') {

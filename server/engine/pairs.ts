@@ -14,7 +14,7 @@ export interface OpenPair {
 
 export const noPair: OpenPair = { pass: '', mate: null, broken: false };
 
-const whyNotGood = 'the other dwell of its pair was skipped';
+const whyNotGood = ['the other dwell of its pair was skipped'];
 const passOf = (path: string) => path.slice(0, path.lastIndexOf(']') + 1);
 
 /** A pair never goes on from one pass into the next. */
@@ -43,6 +43,9 @@ export function breakPair(draft: Draft, row: StepRow): void {
   context.pair = { pass, mate: null, broken: mate === null && !broken };
   if (mate === null) return;
   for (const kept of context.position.dwells) if (kept.seq === mate.seq) kept.good = false;
+  if (context.dwells.some(({ seq, good }) => seq === mate.seq && !good)) return;
+  context.dwellsGood -= 1;
+  context.dwells = context.dwells.map((dwell) => (dwell.seq === mate.seq ? { ...dwell, good: false } : dwell));
   draft.saveRow({ ...mate, good: false });
   draft.log('dwell-not-good', { seq: mate.seq, path: mate.path, why: whyNotGood });
 }

@@ -46,7 +46,7 @@ export interface SkipPlan extends RemainingPlan {
 /** What a skip would leave out and what would be left after it; null where no step stands. */
 export function skipPlan(start: RunStart, { state, context }: RunSnapshot, nowUtcMs: number): SkipPlan | null {
   const { step } = context;
-  if ((state !== 'held' && state !== 'standing') || step === null || step.motion !== null) return null;
+  if ((state !== 'held' && state !== 'standing' && state !== 'awaiting') || step === null || step.motion !== null) return null;
   if (step.row.outcome !== null && !step.broken) return null;
   const { seq, path, kind, label, station, plannedEndUtcMs } = step.row;
   const leftMs = step.broken ? (step.plannedMs ?? 0) : (plannedEndUtcMs ?? nowUtcMs) - nowUtcMs;

@@ -5,14 +5,15 @@ import { planTimeline } from '@/shared/protocol/timeline';
 import type { Clock } from '../interfaces/clock';
 import type { RunJournals } from '../interfaces/run-journal';
 import { type RunStore, StaleRunError, type StoredRun } from '../interfaces/run-store';
+import type { SampleReader } from '../interfaces/sample-reader';
 import type { TurntableLink } from '../interfaces/turntable-link';
 import { isRunOver } from './chart';
 import { checkAtStart } from './check-at-start';
 import { mergeWrites, withAllToPerform } from './merge-journal';
-import { type Arm, CHART_VERSION, type Effect } from './run-context';
+import { type Arm, CHART_VERSION } from './run-context';
 import { RunDriver } from './run-driver';
 import type { RunChange } from './run-driver-parts';
-import { restored } from './stored-snapshot';
+import { type OwnEffect, restored } from './stored-snapshot';
 
 export interface SupervisorParts {
   store: RunStore;
@@ -30,8 +31,10 @@ export interface SupervisorParts {
   guidedBy(rigId: string): string | null;
   /** Of this process, for the log of runs that it takes up. */
   serverName?: string;
+  /** What was measured lately on a rig. */
+  samplesOf?(rigId: string): SampleReader;
   /** Notifications and the end of the arm. */
-  perform(effect: Exclude<Effect, { kind: 'link' }>, start: RunStart): void;
+  perform(effect: OwnEffect, start: RunStart): void;
   /** An error that is nobody's answer, to be logged. */
   onError?(error: unknown, start: RunStart): void;
 }
@@ -222,9 +225,10 @@ export class RigSupervisor {
   }
 
   private drive(start: RunStart, stored: StoredRun | null, link: TurntableLink): RunDriver {
-    const { store, journals, clock, sha256, armOf, whyDisarmed, lockedBy, perform, onError, serverName } = this.parts;
+    const { store, journals, clock, sha256, armOf, whyDisarmed, lockedBy, samplesOf, perform, onError, serverName } = this.parts;
     const driver = new RunDriver({
       ...(serverName === undefined ? {} : { serverName }),
+      ...(samplesOf === undefined ? {} : { samples: samplesOf(start.rigId) }),
       start,
       stored,
       store,

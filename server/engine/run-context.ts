@@ -1,3 +1,7 @@
+import type { DwellFacts } from '@/shared/conditions/dwell-verdict';
+import type { WaitFinding } from '@/shared/conditions/wait-condition';
+import type { Otherwise } from '@/shared/protocol/wait';
+import type { Finding, Look } from './look';
 import type { CursorState, PlannedItem } from '@/shared/protocol/cursor';
 import type { StepRow } from '@/shared/archive/run-records';
 import type { PositionProof } from '@/shared/rig/position-proof';
@@ -14,7 +18,7 @@ import type { OpenPair } from './pairs';
  * Raised whenever the shape or meaning of the stored context changes; `stored-snapshot.ts` brings older ones up to it, and versions that
  * it does not know are quarantined.
  */
-export const CHART_VERSION = 4;
+export const CHART_VERSION = 5;
 
 export type ChartState =
   | 'starting'
@@ -22,6 +26,7 @@ export type ChartState =
   | 'homing'
   | 'moving'
   | 'standing'
+  | 'awaiting'
   | 'interrupted'
   | 'holding'
   | 'held'
@@ -62,6 +67,20 @@ export interface ActiveStep {
   motion: Motion | null;
   /** The row was closed before the step was done (hold, interruption); resuming begins it anew or finishes the move. */
   broken: boolean;
+  /** It ends by a condition or a person, not by a plan. */
+  awaits?: boolean;
+}
+
+/** What a step that ends by a condition or a person waits for. */
+export interface Waiting {
+  sinceUtcMs: number;
+  /** Before that no samples can tell. */
+  firstLookUtcMs: number;
+  /** Null: never. */
+  givesUpUtcMs: number | null;
+  otherwise: Otherwise;
+  /** As last looked at; null before, and for a prompt. */
+  found: WaitFinding | null;
 }
 
 /** A move that was sent to the controller while the dwell before it still lasts. */
@@ -125,6 +144,15 @@ export interface RunContext {
   rowCount: number;
   commandCount: number;
   dwellsDone: number;
+  /** Of these, the good ones. */
+  dwellsGood: number;
+  /** What was measured in the dwells that were judged, the last ones: near minus far so far comes from them. */
+  dwells: DwellFacts[];
+  /** Sequence number of the dwell that is being judged, or was last. */
+  judging: number | null;
+  /** The dwell that ended last was not good, and no repeat was told of it yet. */
+  dwellJustNotGood: boolean;
+  waiting: Waiting | null;
   startedAtUtcMs: number | null;
   endedAtUtcMs: number | null;
   arm: Arm | null;
@@ -163,7 +191,7 @@ export interface RunContext {
   /** UTC ms at which the driver is to send `deadline`; null: nothing is awaited by time. */
   deadlineUtcMs: number | null;
   /** Set while the chart chooses what comes next. */
-  next: 'homing' | 'moving' | 'standing' | 'holding' | 'finished' | 'failed' | null;
+  next: 'homing' | 'moving' | 'standing' | 'awaiting' | 'holding' | 'stopping' | 'finished' | 'failed' | null;
 }
 
 /** Stored form of a run between two events. */
@@ -197,18 +225,24 @@ export type RunEvent =
   /** `acted`: id of a hold that already went to the controller; null where nothing could move. */
   | Told<'database-away', { sinceUtcMs: number; acted: string | null }>
   /** It answers again, and holds all that was kept elsewhere meanwhile. */
-  | Told<'database-back'>;
+  | Told<'database-back'>
+  /** What the samples say to a look. */
+  | Told<'looked', { finding: Finding | null }>
+  /** A person has done what the prompt asks for; `arm`: of the rig, which was armed again at the rig. */
+  | Told<'confirm-prompt', { by: string; arm: Arm | null }>;
 
 export type RunEventType = RunEvent['type'];
 export type RunEventOf<T extends RunEventType> = Extract<RunEvent, { type: T }>;
 
-export type NoticeTopic = 'started' | 'held' | 'resumed' | 'stopped' | 'failed' | 'finished';
+export type NoticeTopic = 'started' | 'held' | 'resumed' | 'stopped' | 'failed' | 'finished' | 'prompted' | 'proved';
 
 /** What is to be done after the transition is saved; every effect has an id that makes a repeat harmless. */
 export type Effect =
   | { kind: 'link'; id: string; command: LinkCommand }
   | { kind: 'void-arm'; id: string; reason: string }
-  | { kind: 'notify'; id: string; topic: NoticeTopic; text: string };
+  | { kind: 'notify'; id: string; topic: NoticeTopic; text: string }
+  /** The driver looks into the samples and answers with `looked`. */
+  | { kind: 'look'; id: string; look: Look };
 
 /** An event of the chain before it is chained. */
 export interface Happening {

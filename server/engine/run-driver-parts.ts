@@ -3,6 +3,7 @@ import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-recor
 import type { Clock } from '../interfaces/clock';
 import type { RunJournal } from '../interfaces/run-journal';
 import type { RunStore, StoredRun } from '../interfaces/run-store';
+import type { SampleReader } from '../interfaces/sample-reader';
 import type { TurntableLink } from '../interfaces/turntable-link';
 import type { Arm } from './run-context';
 import type { RunFacts } from './run-facts';
@@ -18,6 +19,8 @@ export interface RunDriverParts {
   /** Opened and kept by its owner; the driver listens and sends. */
   link: TurntableLink;
   clock: Clock;
+  /** What was measured lately on the rig; absent where nothing ever is. */
+  samples?: SampleReader;
   sha256: Sha256;
   /** The arm of the rig now; null when nobody answers for it. */
   armNow(): Arm | null;

@@ -11,16 +11,13 @@ import { advanceSafely } from './advance-safely';
 import { createPredictor, factsOf, plannedDwells, type RunFacts, summaryOf, withDatabase } from './run-facts';
 import { type Answer, readyController, type RunChange, type RunDriverParts } from './run-driver-parts';
 import { RunRequests } from './run-requests';
+import { lookedInto } from './look';
 import { DATABASE_GRACE_MS, RunSaver } from './run-saver';
 import { ALIVE_MS, RunTimers } from './run-timers';
+import { LONGEST_BEAT_MS, SERVER_U_S } from './timing';
 import { isOwn, type OwnEffect, snapshotIn, type StoredSnapshot } from './stored-snapshot';
 
 type Item = { event: RunEvent; done?: (result: Advance | null) => void } | 'beat' | 'alive';
-
-/** Uncertainty of instants that the server itself stamps, s: the length of one turn of its loop (an estimate, no source). */
-const SERVER_U_S = 0.001;
-/** A loop that has not turned for so long is taken for stuck. */
-const LONGEST_BEAT_MS = 1500;
 
 /**
  * Drives one run: takes one event at a time through the chart, saves what came of it in one transaction, then performs the
@@ -131,16 +128,10 @@ export class RunDriver {
     const { start, armNow } = this.parts;
     const nowUtcMs = this.now().utcMs;
     this.dwellsPlanned ??= plannedDwells(start, this.snapshot.context.startedAtUtcMs ?? nowUtcMs);
-    const facts = factsOf({
-      start,
-      snapshot: this.snapshot,
-      nowUtcMs,
-      arm: armNow(),
-      lockedBy: this.lockedBy(),
-      lastSeq: this.chain.seq,
-      predictedEndUtcMs: this.predict(this.snapshot, nowUtcMs),
-      dwellsPlanned: this.dwellsPlanned,
-    });
+    const { snapshot, dwellsPlanned } = this;
+    const predictedEndUtcMs = this.predict(snapshot, nowUtcMs);
+    const standing = { arm: armNow(), lockedBy: this.lockedBy(), lastSeq: this.chain.seq };
+    const facts = factsOf({ start, snapshot, nowUtcMs, ...standing, predictedEndUtcMs, dwellsPlanned });
     return withDatabase(facts, this.databaseAwaySinceUtcMs);
   }
 
@@ -195,8 +186,7 @@ export class RunDriver {
 
   private actFirst(kind: 'hold' | 'stop', by: string): Answer {
     const at = this.now();
-    this.acted += 1;
-    const id = `${this.runId}-${kind}-${Math.round(at.utcMs)}-${this.acted}`;
+    const id = this.actedId(kind, at.utcMs);
     this.halting += 1;
     const releaseDrivers = this.parts.start.rig.motion?.safeWhenFree === true;
     const kept = new Promise((done) => {
@@ -207,6 +197,12 @@ export class RunDriver {
     this.saver.hurryUp();
     this.kick();
     return { ok: true, serverAtUtcMs: at.utcMs, kept };
+  }
+
+  /** Of a command that goes out before anything is saved. */
+  private actedId(kind: string, utcMs: number): string {
+    this.acted += 1;
+    return `${this.runId}-${kind}-${Math.round(utcMs)}-${this.acted}`;
   }
 
   private heard(link: LinkEvent): void {
@@ -270,7 +266,8 @@ export class RunDriver {
     this.snapshot = result.snapshot;
     this.chain = events.at(-1) ?? this.chain;
     for (const effect of result.effects) this.performEffect(effect);
-    this.armTimers();
+    this.beat();
+    this.timers.awaitDeadline(deadlineOf(this.snapshot));
     this.tell({ facts: this.facts(), steps: result.steps, events });
     if (isRunOver(this.snapshot)) this.finish();
   }
@@ -302,6 +299,8 @@ export class RunDriver {
   }
 
   private performEffect(effect: Effect): void {
+    // Answered at once, before what waits: the chart decides with what is known now.
+    if (effect.kind === 'look') return void this.inbox.unshift({ event: lookedInto(this.parts, effect.look, this.now()) });
     if (effect.kind !== 'link') return this.outside(() => this.parts.perform(effect));
     const { command } = effect;
     const startsMotion = command.kind !== 'hold' && command.kind !== 'stop';
@@ -338,12 +337,8 @@ export class RunDriver {
     if (this.closed) return;
     this.databaseAwaySinceUtcMs = sinceUtcMs;
     if (isRunOver(this.snapshot)) return;
-    let acted: string | null = null;
-    if (wantsMotion(this.snapshot)) {
-      this.acted += 1;
-      acted = `${this.runId}-away-${Math.round(sinceUtcMs)}-${this.acted}`;
-      this.parts.link.send({ kind: 'hold', id: acted });
-    }
+    const acted = wantsMotion(this.snapshot) ? this.actedId('away', sinceUtcMs) : null;
+    if (acted !== null) this.parts.link.send({ kind: 'hold', id: acted });
     this.inbox.unshift({ event: { type: 'database-away', at: this.now(), sinceUtcMs, acted } });
     this.kick();
   }
@@ -366,11 +361,6 @@ export class RunDriver {
   private beat(): void {
     this.lastBeatMs = this.parts.clock.monotonicMs();
     if (wantsMotion(this.snapshot)) this.timers.awaitBeat();
-  }
-
-  private armTimers(): void {
-    this.beat();
-    this.timers.awaitDeadline(deadlineOf(this.snapshot));
   }
 
   /** So that a restart knows how long nobody drove the run. */

@@ -1,11 +1,13 @@
 import type { RunStart, StepRow } from '@/shared/archive/run-records';
+import { reversalSoFar, type ReversalSoFar } from '@/shared/conditions/relative-u';
 import type { RunState } from '@/shared/contracts/runs';
 import { planTimeline } from '@/shared/protocol/timeline';
 import type { RunSummaryColumns } from '../interfaces/run-store';
+import { confirmRefusal } from './awaiting';
 import { Draft, nothingOut } from './draft';
 import { resumeRefusal } from './halting';
 import { predictEndUtcMs } from './predicted-end';
-import type { Arm, ChartState, InterventionKind, KnownPosition, RunSnapshot } from './run-context';
+import type { Arm, ChartState, InterventionKind, KnownPosition, RunSnapshot, Waiting } from './run-context';
 import { skipRefusal } from './skipping';
 
 /** What screens and lists show of a run, read off its snapshot. */
@@ -25,6 +27,10 @@ export interface RunFacts {
   dwellsDone: number;
   dwellsPlanned: number;
   holdAfterDwell: boolean;
+  dwellsGood: number;
+  waiting: WaitingFacts | null;
+  /** Near minus far so far; null before there is a reversal. */
+  reversal: ReversalSoFar | null;
   /** What proves the counted angle; null where nothing was kept. */
   position: KnownPosition | null;
   intervention: { kind: InterventionKind; by: string; serverAtUtcMs: number; confirmedAtUtcMs: number | null } | null;
@@ -34,12 +40,20 @@ export interface RunFacts {
   lastSeq: number;
 }
 
+/** What the present step waits for. */
+export interface WaitingFacts extends Waiting {
+  kind: 'settle' | 'wait' | 'prompt';
+  text: string;
+  mayConfirm: { ok: boolean; why: string };
+}
+
 const shown: Record<ChartState, RunState> = {
   starting: 'starting',
   choosing: 'running',
   homing: 'running',
   moving: 'running',
   standing: 'running',
+  awaiting: 'running',
   interrupted: 'holding',
   holding: 'holding',
   held: 'held',
@@ -90,7 +104,8 @@ export function maySkip(
   { seq, ...now }: Now & { seq: number | null },
 ): { ok: boolean; why: string } {
   const { state, context } = snapshot;
-  if (state !== 'standing' && state !== 'held') return { ok: false, why: 'Only a dwell, a settle or a wait can be left out.' };
+  if (state !== 'standing' && state !== 'awaiting' && state !== 'held')
+    return { ok: false, why: 'Only a dwell, a settle or a wait can be left out.' };
   if (now.lockedBy !== null) return { ok: false, why: now.lockedBy };
   const event = { type: 'skip' as const, at: { utcMs: now.utcMs, uS: 0 }, by: '', arm: now.arm, seq: seq ?? 0 };
   const why = skipRefusal(new Draft(start, event, { context, out: nothingOut }));
@@ -126,6 +141,9 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, pre
     dwellsDone: context.dwellsDone,
     dwellsPlanned,
     holdAfterDwell: context.holdAfterStep !== null,
+    dwellsGood: context.dwellsGood,
+    waiting: waitingFacts(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy }),
+    reversal: reversalSoFar(context.dwells),
     position: context.position,
     intervention:
       intervention === null
@@ -140,6 +158,16 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, pre
     maySkip: { ...maySkip(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy, seq }), seq },
     lastSeq,
   };
+}
+
+function waitingFacts(start: RunStart, { state, context }: RunSnapshot, now: Now): WaitingFacts | null {
+  const { waiting, step } = context;
+  if (state !== 'awaiting' || waiting === null || step === null) return null;
+  const planned = step.item.step;
+  const kind = planned.kind === 'prompt' ? 'prompt' : planned.kind === 'settle' ? 'settle' : 'wait';
+  const event = { type: 'confirm-prompt' as const, at: { utcMs: now.utcMs, uS: 0 }, by: '', arm: now.arm };
+  const why = now.lockedBy ?? confirmRefusal(new Draft(start, event, { context, out: nothingOut }));
+  return { ...waiting, kind, text: planned.kind === 'prompt' ? planned.text : '', mayConfirm: { ok: why === null, why: why ?? '' } };
 }
 
 /** What screens show while the database is away: the run itself cannot know yet for how long. */

@@ -42,6 +42,14 @@ export class RunRequests {
     return allowed.ok ? this.ask({ type: 'resume', at, by, arm }, 'resumed') : { ok: false, why: allowed.why };
   }
 
+  /** A person has done what the prompt asks for, and the rig was armed again; the next step may move. */
+  async confirmPrompt(by: string): Promise<Answer> {
+    const { at, arm, lockedBy } = this.standing();
+    if (lockedBy !== null) return { ok: false, why: lockedBy };
+    if (this.run.snapshot().state !== 'awaiting') return { ok: false, why: 'There is no prompt to be confirmed.' };
+    return this.ask({ type: 'confirm-prompt', at, by, arm }, 'prompt-confirmed');
+  }
+
   /** Leaves out the rest of the step whose row is `seq`. */
   async skip(by: string, seq: number): Promise<Answer> {
     const { at, arm, lockedBy } = this.standing();

@@ -10,6 +10,7 @@ export function skipRefusal(draft: Draft): string | null {
   const { seq, arm } = draft.told('skip');
   const { step, ahead, holdAfterStep } = draft.context;
   if (step === null || (step.row.outcome !== null && !step.broken)) return 'No step is under way: resume goes on with the next one.';
+  if (step.row.kind === 'prompt') return 'A prompt is not left out: arm the rig again and confirm it.';
   if (step.motion !== null) return 'A motion cannot be left out: the sources would not stand where the next step measures.';
   if (step.row.seq !== seq) return 'The step that was reviewed is over. Look at the run again.';
   if (holdAfterStep !== null) return `${holdAfterStep} asked to hold after this step. Withdraw that first, or hold now.`;
@@ -37,7 +38,12 @@ export function skip(draft: Draft): void {
   Object.assign(row, { outcome: 'skipped', good: kind === 'dwell' ? false : row.good });
   draft.saveRow(row);
   context.position.dwells = context.position.dwells.filter((dwell) => dwell.seq !== seq);
-  if (kind === 'dwell') breakPair(draft, row);
+  if (kind === 'dwell') {
+    breakPair(draft, row);
+    context.dwellJustNotGood = true;
+    context.dwells = context.dwells.filter((dwell) => dwell.seq !== seq);
+  }
+  context.waiting = null;
   draft.standAt(draft.event.at, angleDeg ?? context.moment.angleDeg);
   Object.assign(context, {
     arm,

@@ -1,4 +1,3 @@
-import type { StepRow, StepRowKind } from '@/shared/archive/run-records';
 import { advanceCursor, type CursorMoment, type PlannedItem } from '@/shared/protocol/cursor';
 import type { Step, SwingStep } from '@/shared/protocol/document';
 import {
@@ -15,47 +14,18 @@ import {
 import { homingObstacle } from '@/shared/protocol/homing';
 import { pathObstacles } from '@/shared/protocol/motion-path';
 import { stationAt } from '@/shared/protocol/stations';
+import { waitOf } from '@/shared/protocol/wait';
 import type { RigMotion } from '@/shared/rig/document';
 import type { Instant } from '../interfaces/clock';
-import { countingToleranceDeg } from './counted-angle';
+import { beginAwaiting } from './awaiting';
+import { cursorMoment, lookAtDwell } from './dwells';
 import type { Draft } from './draft';
-import { angleFacts } from './position';
+import { runProof } from './proofs';
+import { newRow, stationOf, toleranceDeg } from './rows';
 import type { ActiveStep, Motion, RunContext } from './run-context';
-import { BEGIN_GRACE_MS, LEAD_MS, LEAST_LEAD_MS, MOTION_GRACE_MS } from './timing';
+import { BEGIN_GRACE_MS, LEAD_MS, LEAST_LEAD_MS, LOOK_LEAD_MS, MOTION_GRACE_MS } from './timing';
 
 /** How steps begin and end: the actions of the chart that follow the protocol. */
-
-/** Nearer than this the sources stand where they should, deg. */
-export const toleranceDeg = (draft: Draft): number => countingToleranceDeg(draft.start.rig);
-
-interface RowPlan {
-  item: PlannedItem;
-  station: string;
-  endUtcMs: number | null;
-}
-
-/** A row that begins where and when the step before it ended. */
-function newRow(draft: Draft, { item, station, endUtcMs }: RowPlan): StepRow {
-  const { moment } = draft.context;
-  return {
-    seq: 0,
-    path: item.path,
-    kind: item.step.kind as StepRowKind,
-    label: item.step.label ?? '',
-    station,
-    plannedStartUtcMs: moment.utcMs,
-    plannedEndUtcMs: endUtcMs,
-    startUtcMs: moment.utcMs,
-    endUtcMs: null,
-    uStartS: moment.uS,
-    uEndS: null,
-    angleStartDeg: draft.controller.positionKnown ? moment.angleDeg : null,
-    angleEndDeg: null,
-    outcome: null,
-    ...angleFacts(draft),
-    good: null,
-  };
-}
 
 /** Takes the next step of the protocol and begins it; marks are written in passing. */
 export function chooseNext(draft: Draft): void {
@@ -64,7 +34,8 @@ export function chooseNext(draft: Draft): void {
   context.ahead = null;
   context.moveRetries = 0;
   for (;;) {
-    const next = nextItem(draft, context);
+    const next = nextItem(draft, { cursor: context.cursor, moment: cursorMoment(draft) });
+    context.dwellJustNotGood = false;
     if (next === null) {
       context.next = 'failed';
       return;
@@ -80,8 +51,14 @@ export function chooseNext(draft: Draft): void {
       return;
     }
     context.cursor = cursor;
-    if (item.step.kind !== 'mark') return beginItem(draft, item);
-    writeMark(draft, item);
+    if (item.step.kind === 'mark') writeMark(draft, item);
+    else if (item.step.kind === 'proof') {
+      const halt = runProof(draft, item);
+      if (halt !== null) {
+        context.next = halt;
+        return;
+      }
+    } else return beginItem(draft, item);
   }
 }
 
@@ -142,10 +119,12 @@ function beginKind(draft: Draft, item: PlannedItem): void {
       return beginHome(draft, item);
     case 'swing':
       return beginSwing(draft, { item, late: false });
+    case 'prompt':
+      return beginAwaiting(draft, item);
     case 'dwell':
     case 'settle':
     case 'wait':
-      return beginStanding(draft, item);
+      return waitOf(item.step) === null ? beginStanding(draft, item) : beginAwaiting(draft, item);
     default:
       draft.because('not-yet', `Step ${item.path}: ${item.step.kind} cannot be run by this version; issue a revision without it.`);
       draft.context.next = 'failed';
@@ -247,7 +226,7 @@ export function beginStanding(draft: Draft, item: PlannedItem, plannedMs: number
   const end = plannedMs === null ? standingEnd(draft, item.step) : { endUtcMs: moment.utcMs + plannedMs, holds: false };
   const row = newRow(draft, { item, station: stationOf(draft), endUtcMs: end.endUtcMs });
   draft.openStep({ item, row, plannedMs: end.endUtcMs - moment.utcMs, motion: null, broken: false });
-  context.deadlineUtcMs = Math.max(moment.utcMs, end.endUtcMs - LEAD_MS);
+  context.deadlineUtcMs = Math.max(moment.utcMs, end.endUtcMs - firstLeadMs(item.step.kind));
   context.next = 'standing';
   if (!end.holds) return;
   draft.closeRow({ at: moment, angleDeg: row.angleStartDeg, outcome: 'done' });
@@ -256,17 +235,22 @@ export function beginStanding(draft: Draft, item: PlannedItem, plannedMs: number
   context.next = 'holding';
 }
 
-function describeTime(step: Step): string {
-  return step.kind === 'wait' && 'localTime' in step.until ? step.until.localTime : 'the time';
+/** A dwell is judged a little before the next move is sent, for it may decide whether there is one. */
+export const firstLeadMs = (kind: string): number => (kind === 'dwell' ? LOOK_LEAD_MS : LEAD_MS);
+
+/** Time to judge the dwell that ends soon. */
+export function lookIsDue(draft: Draft): boolean {
+  const { step, judging } = draft.context;
+  return step?.row.kind === 'dwell' && judging !== step.row.seq && standingEndUtcMs(step) - draft.nowUtcMs > LEAST_LEAD_MS;
 }
 
-/** The station at which the sources were brought to stand; a counted angle is off the station's by up to half a step. */
-function stationOf(draft: Draft): string {
-  const { rig } = draft.start;
-  const { moment, station = '' } = draft.context;
-  const tolerance = toleranceDeg(draft);
-  const standsAt = (name: string) => Math.abs((rig.stations[name]?.value ?? Number.NaN) - moment.angleDeg) <= tolerance;
-  return standsAt(station) ? station : (Object.keys(rig.stations).find(standsAt) ?? '');
+export function lookBeforeEnd(draft: Draft): void {
+  lookAtDwell(draft, standingEndUtcMs(draft.step));
+  draft.context.deadlineUtcMs = Math.max(draft.nowUtcMs, standingEndUtcMs(draft.step) - LEAD_MS);
+}
+
+function describeTime(step: Step): string {
+  return step.kind === 'wait' && 'localTime' in step.until ? step.until.localTime : 'the time';
 }
 
 function standingEnd(draft: Draft, step: Step): { endUtcMs: number; holds: boolean } {
@@ -321,9 +305,10 @@ export function sendAhead(draft: Draft): void {
 /** The swing that follows at `utcMs`, looking through marks, or null where something else follows. */
 function peekSwing(draft: Draft, utcMs: number): SwingStep | null {
   let { cursor } = draft.context;
-  const moment = { utcMs, angleDeg: draft.context.moment.angleDeg };
+  let moment: CursorMoment = cursorMoment(draft, utcMs);
   for (;;) {
     const next = nextItem(draft, { cursor, moment });
+    moment = { ...moment, notGood: false };
     if (next?.item == null) return null;
     if (next.item.step.kind === 'swing') return next.item.step;
     if (next.item.step.kind !== 'mark') return null;

@@ -1,10 +1,10 @@
 import type { StoredRun } from '../interfaces/run-store';
-import { CHART_VERSION, type Effect, type KnownPosition, type RunContext, type RunSnapshot } from './run-context';
-import { noPair, type OpenPair } from './pairs';
+import { CHART_VERSION, type Effect, type RunContext, type RunSnapshot } from './run-context';
+import { noPair } from './pairs';
 import { nothingKnown } from './position';
 
-/** What the driver performs itself, after it was saved: all but the commands to the controller. */
-export type OwnEffect = Exclude<Effect, { kind: 'link' }>;
+/** What the driver performs itself, after it was saved: all but the commands to the controller and looks into the samples. */
+export type OwnEffect = Exclude<Effect, { kind: 'link' | 'look' }>;
 
 /** Snapshot as stored, with what the next process has to know of this one. */
 export interface StoredSnapshot extends RunSnapshot {
@@ -14,24 +14,25 @@ export interface StoredSnapshot extends RunSnapshot {
   toPerform: OwnEffect[];
 }
 
-export const isOwn = (effect: Effect): effect is OwnEffect => effect.kind !== 'link';
+export const isOwn = (effect: Effect): effect is OwnEffect => effect.kind !== 'link' && effect.kind !== 'look';
 
 /**
  * Contexts of version 1 tell nothing of passes of the home edge: the count is unproved until the next one. Those of version 2 were never
- * written while the database was away. Those of version 3 do not tell which dwells make a pair: the next one begins one.
+ * written while the database was away. Those of version 3 do not tell which dwells make a pair: the next one begins one. Before version 5 no
+ * dwell was judged and nothing was waited for.
  */
-type OldContext = Omit<RunContext, 'position' | 'databaseAwaySinceUtcMs' | 'pair'> & {
-  position?: KnownPosition;
-  databaseAwaySinceUtcMs?: number | null;
-  pair?: OpenPair;
-};
+type Newer = 'position' | 'databaseAwaySinceUtcMs' | 'pair' | 'dwellsGood' | 'dwells' | 'judging' | 'dwellJustNotGood' | 'waiting';
+type OldContext = Omit<RunContext, Newer> & Partial<Pick<RunContext, Newer>>;
 
 /** A snapshot of this or an older version in the shape of this one; null where this version cannot read it. */
 export function restored(snapshot: unknown, chartVersion: number): RunSnapshot | null {
   if (snapshot === null || chartVersion < 1 || chartVersion > CHART_VERSION) return null;
   const { state, context } = snapshot as Omit<RunSnapshot, 'context'> & { context: OldContext };
-  const { position = nothingKnown, databaseAwaySinceUtcMs = null, pair = noPair } = context;
-  return { version: CHART_VERSION, state, context: { ...context, position, databaseAwaySinceUtcMs, pair } };
+  const newer = {
+    ...{ position: nothingKnown, databaseAwaySinceUtcMs: null, pair: noPair, dwellsGood: context.dwellsDone },
+    ...{ dwells: [], judging: null, dwellJustNotGood: false, waiting: null },
+  };
+  return { version: CHART_VERSION, state, context: { ...newer, ...context } };
 }
 
 /** @throws Error when the store holds a snapshot of another version: the supervisor quarantines such runs before. */

@@ -16,3 +16,11 @@ export const CONFIRM_MS = 60_000;
 export const ANSWER_MS = 60_000;
 /** The longest interruption after which a run resumes by itself. */
 export const GAP_LIMIT_MS = 600_000;
+/** A dwell is judged this long before it ends: with the samples that have come by then. */
+export const LOOK_LEAD_MS = 3_000;
+/** What a step waits for is looked at so often. */
+export const LOOK_MS = 10_000;
+/** Uncertainty of instants that the server itself stamps, s: the length of one turn of its loop (an estimate, no source). */
+export const SERVER_U_S = 0.001;
+/** A loop that has not turned for so long is taken for stuck. */
+export const LONGEST_BEAT_MS = 1500;

@@ -91,8 +91,8 @@ async function identify(
   req: Request,
   services: Services,
 ): Promise<{ me: SignedIn | null; membership: Membership | null }> {
+  if (contract.access === 'public' || contract.access === 'device') return { me: null, membership: null };
   const token = readSessionToken(req, services.config);
-  if (contract.access === 'public') return { me: null, membership: null };
   if (token === null) throw new ProblemError('not-signed-in', 'Sign in first; the request carries no session.');
   const labId = typeof req.params.labId === 'string' ? req.params.labId : '';
   const known = { contract, token, labId, services };
@@ -127,7 +127,7 @@ async function identified({ contract, token, labId, services }: Asked, remembere
   const me = remembered?.me ?? (await services.access.signedIn(token));
   if (me === null)
     throw new ProblemError('session-expired', 'The session has ended. Sign in again; what you typed is still on the screen.');
-  if (contract.access === 'public' || contract.access === 'signed-in') return { me, membership: null };
+  if (contract.access === 'public' || contract.access === 'device' || contract.access === 'signed-in') return { me, membership: null };
   const membership = remembered?.membership ?? (await services.access.membership(me.userId, labId));
   if (membership === null) throw notFound('lab');
   assertMay(membership, contract.access, services);

@@ -72,6 +72,7 @@ function answerProblems(services: Services): ErrorRequestHandler {
       return;
     }
     res.status(problemCodes[problem.code]).set('Cache-Control', 'no-store');
+    if (problem.retryAfterS !== undefined) res.set('Retry-After', String(Math.max(1, Math.ceil(problem.retryAfterS))));
     if (problem.code === 'too-large') res.set('Connection', 'close');
     res.type('application/problem+json').send(JSON.stringify(problemOf(problem, `urn:uuid:${requestIdOf(res)}`)));
     req.unpipe();

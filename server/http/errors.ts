@@ -69,6 +69,9 @@ const hasCode = (error: ErrorLike, codes: RegExp) => typeof error.code === 'stri
 const saysAway = (error: ErrorLike) =>
   (hasCode(error, awayCode) && !isFileError(error)) || (typeof error.message === 'string' && awayText.test(error.message));
 
+/** A few seconds. */
+const awayRetryS = 5;
+
 const isFileError = (error: ErrorLike) => error.code === 'ENOENT' && error.syscall !== 'connect';
 
 /** Whether a failure says that the database cannot be reached, or is going away. */
@@ -92,7 +95,7 @@ export function problemErrorOf(error: unknown, databaseAwaySinceUtcMs: number | 
       return new ProblemError(
         'database-away',
         `The database does not answer ${awaySince(databaseAwaySinceUtcMs)}. Nothing was changed; hold and stop still work. Try again in a few seconds.`,
-      );
+      ).after(awayRetryS);
     if (error.status === 400) return new ProblemError('invalid-input', 'The address or the body of the request could not be read.');
     if (error.status === 404) return new ProblemError('not-found', 'There is nothing at this address.');
   }

@@ -67,18 +67,19 @@ export function openApiOf(contracts: readonly RouteContract[], version: string):
       schemas: components.schemas,
       securitySchemes: {
         session: { type: 'apiKey', in: 'cookie', name: 'ef', description: '`__Host-ef` where the server is reached over TLS.' },
+        device: { type: 'http', scheme: 'bearer', description: 'A device token, made on the page of the rig.' },
       },
     },
   };
 }
 
 function operationOf(contract: RouteContract, components: Components): Json {
-  const isAct = contract.access !== 'public' && contract.access !== 'signed-in';
+  const isAct = contract.access in acts;
   const body = requestBodyOf(contract, components);
   return {
     operationId: contract.name,
     summary: contract.summary,
-    ...(contract.access === 'public' ? { security: [] } : { security: [{ session: [] }] }),
+    security: contract.access === 'public' ? [] : [contract.access === 'device' ? { device: [] } : { session: [] }],
     ...(isAct ? { 'x-act': contract.access, 'x-roles': acts[contract.access as Act] } : {}),
     parameters: parametersOf(contract, components),
     ...(body === null ? {} : { requestBody: body }),
@@ -163,9 +164,9 @@ function responsesOf(contract: RouteContract, components: Components): Json {
 /** Problems of the route itself and those the edge may answer on it. */
 function everyProblemOf(contract: RouteContract): Set<keyof typeof problemCodes> {
   const edge: (keyof typeof problemCodes)[] = ['too-many-requests', 'internal', 'database-away'];
-  if (contract.access !== 'public') edge.push('not-signed-in', 'session-expired');
-  if (contract.access !== 'public' && contract.access !== 'signed-in') edge.push('not-allowed', 'not-found');
-  if (contract.method !== 'GET') edge.push('cross-site');
+  if (contract.access === 'signed-in' || contract.access in acts) edge.push('not-signed-in', 'session-expired');
+  if (contract.access in acts) edge.push('not-allowed', 'not-found');
+  if (contract.method !== 'GET' && contract.access !== 'device') edge.push('cross-site');
   if (contract.body !== undefined) edge.push('invalid-input', 'too-large', 'wrong-content-type');
   if (contract.idempotent === true) edge.push('key-reused', 'still-running');
   if (contract.etag === 'required') edge.push('precondition-required');

@@ -5,6 +5,8 @@ export type ProblemItem = NonNullable<Problem['errors']>[number];
 /** A failure with a sentence for people and a stable code for programs; the edge turns it into an RFC 9457 answer. */
 export class ProblemError extends Error {
   override readonly name = 'ProblemError';
+  /** When it makes sense to try again, s: the header `Retry-After`. */
+  retryAfterS?: number;
 
   /**
    * @param code stable code of `shared/contracts/problem.ts`; decides the HTTP status
@@ -18,6 +20,12 @@ export class ProblemError extends Error {
   ) {
     super(detail);
   }
+
+  /** The same, saying after how many seconds it makes sense to try again. */
+  after(seconds: number): this {
+    this.retryAfterS = seconds;
+    return this;
+  }
 }
 
 /** Short names of the problems, the same for every occurrence of a code. */
@@ -25,6 +33,7 @@ export const problemTitles: Record<ProblemCode, string> = {
   'invalid-input': 'The request is not right',
   'not-signed-in': 'Nobody is signed in',
   'wrong-credentials': 'E-mail or password is wrong',
+  'wrong-token': 'The device token does not count',
   'session-expired': 'The session has ended',
   'not-allowed': 'The role may not do this',
   'cross-site': 'The request came from another site',

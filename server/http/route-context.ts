@@ -30,8 +30,8 @@ export interface RouteContext<R extends RouteContract = RouteContract> {
   params: ParamsOf<R>;
   query: ParsedOf<R, 'query'>;
   body: ParsedOf<R, 'body'>;
-  me: R['access'] extends 'public' ? SignedIn | null : SignedIn;
-  membership: R['access'] extends 'public' | 'signed-in' ? null : Membership;
+  me: R['access'] extends 'public' | 'device' ? SignedIn | null : SignedIn;
+  membership: R['access'] extends 'public' | 'device' | 'signed-in' ? null : Membership;
   services: Services;
   /** The version named by `If-Match`, without quotes; never empty where the contract says `etag: 'required'`. */
   ifMatch: string | null;

@@ -1,6 +1,7 @@
 import type { RunStart } from '@/shared/archive/run-records';
 import type { RunSummary, RunView } from '@/shared/contracts/runs';
-import { factsOf, plannedDwells, type RunFacts } from '../engine/run-facts';
+import type { WaitingView } from '@/shared/contracts/waiting';
+import { factsOf, plannedDwells, type RunFacts, type WaitingFacts } from '../engine/run-facts';
 import { restored } from '../engine/stored-snapshot';
 import { findRun, readSteps, type RunListRow, type RunRecord } from '../store/runs-read';
 import { isoOf, isoOrNull } from './maker';
@@ -63,6 +64,9 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
     dwellsDone: facts.dwellsDone,
     dwellsPlanned: facts.dwellsPlanned,
     holdAfterDwell: facts.holdAfterDwell,
+    dwellsGood: facts.dwellsGood,
+    waiting: facts.waiting === null ? null : waitingViewOf(facts.waiting),
+    reversal: facts.reversal,
     position: facts.position === null ? null : positionViewOf(start.rig, facts.position),
     intervention:
       facts.intervention === null
@@ -84,6 +88,16 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
 }
 
 const notDriven = { ok: false, why: 'The run is not driven by this server.' };
+
+function waitingViewOf({ kind, text, givesUpUtcMs, otherwise, firstLookUtcMs, found, mayConfirm }: WaitingFacts): WaitingView {
+  return {
+    ...{ kind, text, otherwise, mayConfirm },
+    givesUpAt: isoOrNull(givesUpUtcMs),
+    firstLookAt: isoOf(firstLookUtcMs),
+    samples: found?.samples ?? null,
+    readings: found?.readings ?? [],
+  };
+}
 
 async function factsOfStored(services: Services, run: RunRecord): Promise<RunFacts> {
   const dwellsPlanned = plannedDwells(run.start, run.startedAt ?? run.createdAt);
@@ -113,6 +127,9 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
     dwellsDone: steps.filter((step) => step.kind === 'dwell' && step.outcome === 'done').length,
     dwellsPlanned,
     holdAfterDwell: false,
+    dwellsGood: steps.filter((step) => step.kind === 'dwell' && step.outcome === 'done' && step.good !== false).length,
+    waiting: null,
+    reversal: null,
     position: null,
     intervention: null,
     mayResume: notDriven,

@@ -10,6 +10,8 @@ const safeMethods = new Set(['GET', 'HEAD', 'OPTIONS']);
  */
 export function assertSameOrigin(req: Request, config: ServerConfig): void {
   if (safeMethods.has(req.method)) return;
+  // No page of another site can add this header, and what it lets in needs no cookie.
+  if (req.headers.authorization?.startsWith('Bearer ') === true) return;
   const site = req.headers['sec-fetch-site'];
   if (site === 'same-origin') return;
   const own = config.publicUrl ?? `${req.protocol}://${req.headers.host ?? ''}`;

@@ -13,7 +13,9 @@ import type { OutgoingPort } from '../interfaces/outgoing';
 import type { PushPort } from '../interfaces/push';
 import type { TellParts } from '../notify/tell';
 import type { RigStations } from '../interfaces/rig-stations';
-import type { SampleStore } from '../interfaces/sample-store';
+import type { AppendRates } from '../ingest/append-rate';
+import type { ChannelFacts } from '../ingest/recent-samples';
+import type { SampleBatch, SampleStore } from '../interfaces/sample-store';
 import type { ServerConfig } from '../interfaces/server-config';
 import type { SessionPort } from '../interfaces/sessions';
 import type { Connection } from '../store/database';
@@ -46,6 +48,10 @@ export interface Services {
   /** How people are told, by every means. */
   tell: TellParts;
   samples: SampleStore;
+  /** How much each device may still append. */
+  appendRates: AppendRates;
+  /** Samples of a rig that have just come: for those who watch, and for the conditions of its run. */
+  arrived(rigId: string, channel: ChannelFacts & { channelId: string }, batch: SampleBatch): void;
   stations: RigStations;
   arms: ArmKeeper;
   arming: Arming;

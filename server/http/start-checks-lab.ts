@@ -1,5 +1,4 @@
 import type { StartCheck } from '@/shared/contracts/rigs';
-import { formatDuration } from '@/shared/lib/format-duration';
 import { formatFixed, NARROW_SPACE } from '@/shared/lib/format-number';
 import { formatDayAndClock } from '@/shared/lib/format-time';
 import type { Timeline } from '@/shared/protocol/timeline';
@@ -7,17 +6,13 @@ import { cautionsVersion } from '@/shared/rig/cautions';
 import type { RigStation } from '../interfaces/rig-stations';
 import { ping } from '../store/health';
 import { signaturesOf } from '../store/locks';
-import { activeRuns, sampleFlow, type RunListRow } from '../store/runs-read';
+import { activeRuns, type RunListRow } from '../store/runs-read';
+import { dataCheck } from './data-check';
 import type { Services } from './services';
 import { check, fail, note, pass, type Outcome, type StartPlan } from './start-check-parts';
 
 /** What the lab and its server say: data, storage, other runs, and who answers for the rig. */
 
-/** Deflection older than this means that nothing is arriving. */
-const freshMs = 60_000;
-/** As long as the deflection has to have flowed before its flow is called steady, and the gap that it then may have had (no source). */
-const flowMs = 600_000;
-const longestGapMs = 10_000;
 const slowDatabaseMs = 1_000;
 const gib = 2 ** 30;
 /** Room that a run leaves for all else, and what an hour of it takes at 10 Hz (10 × 3600 rows of 200 bytes: an estimate, no source). */
@@ -33,7 +28,7 @@ interface Seen {
 export async function labChecks(services: Services, plan: StartPlan, seen: Seen): Promise<StartCheck[]> {
   const runs = await activeRuns(services.database.db, plan.rig.labId);
   return [
-    check('data', 'Deflection', await dataCheck(services, seen)),
+    check('data', 'Deflection', await dataCheck(services, plan, seen.station)),
     check('database', 'Database', await databaseCheck(services)),
     check('disk', 'Free disk', await diskCheck(services, seen.timeline)),
     check('free', 'No other run', freeCheck(services, plan.rig.id, runs.get(plan.rig.id))),
@@ -41,29 +36,6 @@ export async function labChecks(services: Services, plan: StartPlan, seen: Seen)
     check('armed', 'Armed on site', armedCheck(services, plan, seen)),
     check('cautions', 'Cautions', await cautionsCheck(services, plan)),
   ];
-}
-
-/** A rig that fills its channel itself must be doing so; where data are brought in later nothing can be seen now. */
-async function dataCheck(services: Services, { station, nowUtcMs }: Seen): Promise<Outcome> {
-  if (station?.channel == null) return note('No deflection arrives by itself on this rig: bring the file in after the run.');
-  const { name, id } = station.channel;
-  const flow = await sampleFlow(services.database, { labId: station.labId, channelId: id }, nowUtcMs - flowMs);
-  if (flow.lastUtcMs === null) return fail(`The channel ${name} has no sample yet.`);
-  const silentMs = Math.max(0, nowUtcMs - flow.lastUtcMs);
-  const gapMs = flow.longestGapMs ?? 0;
-  const figures = [
-    { name: 'last sample', value: silentMs / 1000, unit: 's' as const },
-    { name: 'longest gap', value: gapMs / 1000, unit: 's' as const },
-  ];
-  if (silentMs > freshMs) return fail(`The channel ${name} has had no sample for ${String(Math.round(silentMs / 1000))} s.`, ...figures);
-  const flowsMs = nowUtcMs - (flow.firstUtcMs ?? nowUtcMs);
-  if (gapMs > longestGapMs) return note(`The channel ${name} is being filled, but had a gap in the last 10 min.`, ...figures);
-  if (flowsMs < flowMs - longestGapMs)
-    return note(
-      `The channel ${name} is being filled, for ${formatDuration(flowsMs / 1000)} now; 10 min without a gap show that it is steady.`,
-      ...figures,
-    );
-  return pass(`The channel ${name} has been filled for 10 min without a gap.`, ...figures);
 }
 
 async function databaseCheck({ database, clock }: Services): Promise<Outcome> {

@@ -32,6 +32,7 @@ export interface LiveSampleBatch {
   channelId: string;
   channel: string;
   unit: string;
+  rateHz: number;
   utcMs: Float64Array;
   value: Float64Array;
 }

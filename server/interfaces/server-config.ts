@@ -34,4 +34,10 @@ export interface ServerConfig {
     importBytes: number;
     streamsPerUser: number;
   };
+  /** What each device may append. */
+  devices: {
+    batchBytes: number;
+    batchesPerMinute: number;
+    samplesPerMinute: number;
+  };
 }

@@ -148,7 +148,8 @@ export function storeImport(
   });
 }
 
-async function assertSameValues(
+/** @throws ConflictingSamplesError where the channel holds another value at an instant of the batch */
+export async function assertSameValues(
   client: PoolClient,
   { labId, channelId }: { labId: string; channelId: string },
   batch: SampleBatch,
@@ -181,6 +182,7 @@ export interface WantedChannel {
   unit: string;
   role: ChannelRecord['role'];
   source: ChannelRecord['source'];
+  rateHz?: number | null;
   createdAt: number;
 }
 

@@ -114,12 +114,13 @@ export async function readSteps(db: Handle, run: { labId: string; runId: string 
 export async function readEvents(
   db: Handle,
   run: { labId: string; runId: string },
-  page: { afterSeq: number; limit?: number },
+  page: { afterSeq: number; limit?: number; kind?: string | undefined },
 ): Promise<ChainedEvent[]> {
+  const ofKind = page.kind === undefined ? undefined : eq(runEvents.kind, page.kind);
   const rows = await db
     .select()
     .from(runEvents)
-    .where(and(eq(runEvents.labId, run.labId), eq(runEvents.runId, run.runId), gt(runEvents.seq, page.afterSeq)))
+    .where(and(eq(runEvents.labId, run.labId), eq(runEvents.runId, run.runId), gt(runEvents.seq, page.afterSeq), ofKind))
     .orderBy(asc(runEvents.seq))
     .limit(page.limit ?? 1_000_000);
   return rows.map(({ labId: _lab, runId: _run, ...event }) => event);

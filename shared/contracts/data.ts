@@ -10,6 +10,8 @@ export const channelViewSchema = z.strictObject({
   unit: z.string(),
   role: z.enum(['deflection', 'environment', 'turntable']),
   source: z.enum(['simulated', 'import', 'stream']),
+  /** Samples a second that are to be expected of it; null where nothing is. */
+  rateHz: z.number().nullable(),
 });
 export type ChannelView = z.infer<typeof channelViewSchema>;
 

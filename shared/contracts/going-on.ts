@@ -26,3 +26,12 @@ export const skipStep = defineRoute({
   body: z.strictObject({ ...motionFields, /** Row of the step that was reviewed. */ seq: z.number().int().positive() }),
   problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'not-reviewed', 'locked', 'key-reused', 'still-running'],
 });
+export const confirmPrompt = defineRoute({
+  ...intervention('confirm-prompt', {
+    name: 'confirmPrompt',
+    summary: 'Confirm that what a prompt asks for is done, after the rig was armed again; the run goes on at once',
+    access: 'prompt.confirm',
+  }),
+  body: z.strictObject({ tappedAt: motionFields.tappedAt }),
+  problems: ['invalid-input', 'not-found', 'not-possible-now', 'not-armed', 'locked', 'key-reused', 'still-running'],
+});

@@ -1,6 +1,7 @@
 import * as alarms from './alarms';
 import * as calls from './calls';
 import * as data from './data';
+import * as devices from './devices';
 import * as doors from './doors';
 import * as evaluations from './evaluations';
 import * as goingOn from './going-on';
@@ -33,6 +34,7 @@ export const routes: readonly RouteContract[] = [
   schedules,
   doors,
   data,
+  devices,
   evaluations,
   work,
   alarms,

@@ -5,6 +5,7 @@ export const problemCodes = {
   'invalid-input': 400,
   'not-signed-in': 401,
   'wrong-credentials': 401,
+  'wrong-token': 401,
   'session-expired': 401,
   'not-allowed': 403,
   'cross-site': 403,

@@ -10,6 +10,7 @@ const upTo = (last: Role): readonly Role[] => roles.slice(0, roles.indexOf(last)
 export const acts = {
   'members.manage': ['owner'],
   'lab.settings': ['owner'],
+  'tokens.manage': ['owner'],
   'rig.edit': upTo('keeper'),
   'rig.arm': upTo('operator'),
   'cautions.sign': upTo('operator'),
@@ -18,6 +19,7 @@ export const acts = {
   'protocol.write': upTo('operator'),
   'run.start': upTo('operator'),
   'run.resume': upTo('operator'),
+  'prompt.confirm': upTo('operator'),
   'run.hold': all,
   'run.stop': all,
   'alarm.acknowledge': upTo('analyst'),

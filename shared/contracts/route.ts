@@ -13,8 +13,8 @@ export interface RouteContract {
   readonly method: 'GET' | 'POST' | 'PUT' | 'PATCH' | 'DELETE';
   /** Express style under `/api`, for example `/labs/:labId/runs/:runId`. */
   readonly path: string;
-  /** `public`: nobody need be signed in; `signed-in`: any account; otherwise an act of the role matrix in `:labId`. */
-  readonly access: 'public' | 'signed-in' | Act;
+  /** `public`: nobody need be signed in; `device`: a device token; `signed-in`: any account; otherwise an act of the role matrix in `:labId`. */
+  readonly access: 'public' | 'device' | 'signed-in' | Act;
   readonly query?: z.ZodType;
   readonly body?: z.ZodType;
   /** JSON body of the success reply; absent for 204, streams and files. */
@@ -22,7 +22,7 @@ export interface RouteContract {
   readonly status: 200 | 201 | 202 | 204;
   /** Media type of a reply or request that is not JSON. */
   readonly produces?: 'text/event-stream' | 'text/calendar' | 'text/csv' | 'application/zip' | 'application/json';
-  readonly consumes?: 'text/csv';
+  readonly consumes?: 'text/csv' | 'application/x-ndjson';
   /** While the database is away it is answered out of the memory of the server that drives the runs, as far as that goes. */
   readonly fromMemory?: true;
   /** A command: needs an `Idempotency-Key` header, a repeat returns the first answer. */

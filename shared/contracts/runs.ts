@@ -4,49 +4,14 @@ import { rigDocumentSchema } from '../rig/document';
 import { idSchema, instantSchema, pageOf, pageQuerySchema } from './common';
 import { positionViewSchema } from './position';
 import { defineRoute } from './route';
+import { chainedEventSchema, interventionSchema, stepRowViewSchema } from './run-rows';
+import { reversalSoFarSchema, waitingSchema } from './waiting';
+
+export type { StepRowView } from './run-rows';
 
 export const runStates = ['rehearsing', 'starting', 'running', 'holding', 'held', 'stopping', 'finished', 'stopped', 'failed'] as const;
 export const runStateSchema = z.enum(runStates);
 export type RunState = z.infer<typeof runStateSchema>;
-
-/** The three honest stages of hold and stop: sent (the phone's own), the server has it, the controller confirmed. */
-export const interventionSchema = z.strictObject({
-  kind: z.enum(['hold', 'hold-after-dwell', 'hold-withdrawn', 'resume', 'skip', 'stop']),
-  by: z.string(),
-  serverAt: instantSchema,
-  /** When the controller itself said that the turntable stands still; null until then. */
-  confirmedAt: instantSchema.nullable(),
-});
-
-export const stepRowViewSchema = z.strictObject({
-  seq: z.number().int(),
-  path: z.string(),
-  kind: z.string(),
-  label: z.string(),
-  station: z.string(),
-  plannedStartUtcMs: z.number(),
-  plannedEndUtcMs: z.number().nullable(),
-  startUtcMs: z.number(),
-  endUtcMs: z.number().nullable(),
-  uStartS: z.number(),
-  uEndS: z.number().nullable(),
-  angleStartDeg: z.number().nullable(),
-  angleEndDeg: z.number().nullable(),
-  outcome: z.enum(['done', 'cut short', 'skipped', 'failed', 'late']).nullable(),
-  angleSource: z.enum(['counted', 'edge-verified', 'encoder']),
-  uAngleDeg: z.number().nullable(),
-  good: z.boolean().nullable(),
-});
-export type StepRowView = z.infer<typeof stepRowViewSchema>;
-
-export const chainedEventSchema = z.strictObject({
-  seq: z.number().int(),
-  at: z.string(),
-  kind: z.string(),
-  data: z.record(z.string(), z.unknown()),
-  prev: z.string(),
-  hash: z.string(),
-});
 
 export const runSummarySchema = z.strictObject({
   id: idSchema,
@@ -76,6 +41,12 @@ export const runViewSchema = runSummarySchema.extend({
   dwellsDone: z.number().int(),
   dwellsPlanned: z.number().int(),
   holdAfterDwell: z.boolean(),
+  /** Of the dwells done, those that count. */
+  dwellsGood: z.number().int(),
+  /** What the present step waits for; null where it ends by plan. */
+  waiting: waitingSchema.nullable(),
+  /** What the run has reached: near minus far so far, from the good dwells; null before there is a reversal. */
+  reversal: reversalSoFarSchema.nullable(),
   /** How well the counted angle is proved; null where the engine has kept nothing of the run. */
   position: positionViewSchema.nullable(),
   intervention: interventionSchema.nullable(),
@@ -102,6 +73,9 @@ const runProgressSchema = runViewSchema.pick({
   dwellsDone: true,
   dwellsPlanned: true,
   holdAfterDwell: true,
+  dwellsGood: true,
+  waiting: true,
+  reversal: true,
   position: true,
   intervention: true,
   mayResume: true,
@@ -223,7 +197,7 @@ export const getRun = defineRoute({
 /** The contract of an act on a run that goes on. */
 export const intervention = <L extends string>(
   leaf: L,
-  route: { name: string; summary: string; access: 'run.hold' | 'run.stop' | 'run.resume' },
+  route: { name: string; summary: string; access: 'run.hold' | 'run.stop' | 'run.resume' | 'prompt.confirm' },
 ) =>
   defineRoute({
     ...route,
@@ -284,7 +258,7 @@ export const listEvents = defineRoute({
   path: `${path}/events`,
   access: 'read',
   status: 200,
-  query: pageQuerySchema,
+  query: pageQuerySchema.extend({ kind: z.string().max(60).optional() }),
   response: pageOf(chainedEventSchema),
   problems: ['invalid-input', 'not-found'],
 });

@@ -38,12 +38,20 @@ function repeatFindings(step: RepeatStep, path: string, depth: number): Finding[
     });
   if (step.steps.length === 0)
     findings.push({ code: 'no-steps', path, message: 'The repeat holds no steps. Put at least one into it, or remove it.' });
-  const needsAtMost = step.counting === 'good' || (step.until !== undefined && 'relativeStatisticalU' in step.until);
+  const byU = step.until !== undefined && 'relativeStatisticalU' in step.until;
+  const needsAtMost = step.counting === 'good' || byU;
   if (needsAtMost && step.atMost === undefined)
     findings.push({
       code: 'field-missing',
       path,
       message: 'atMost is missing: without it the number of passes has no bound. It takes a whole number from 1.',
+    });
+  const least = step.counting === 'good' ? step.times : byU ? step.atLeast : undefined;
+  if (step.atMost !== undefined && least !== undefined && least > step.atMost)
+    findings.push({
+      code: 'bounds-crossed',
+      path,
+      message: `atMost is ${step.atMost}, fewer than the ${least} passes that are asked for. It takes a whole number from ${least}.`,
     });
   return findings;
 }
@@ -92,7 +100,8 @@ function executedCount(step: Step): number {
   return inside === 0 ? 0 : inside * passes(step);
 }
 
-function passes({ times, counting, atMost }: RepeatStep): number {
+function passes({ times, until, counting, atMost }: RepeatStep): number {
+  if (until !== undefined && 'relativeStatisticalU' in until) return atMost ?? 1;
   if (times === undefined) return 1;
   return counting === 'good' ? (atMost ?? times) : Math.min(times, atMost ?? times);
 }

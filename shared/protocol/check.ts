@@ -1,4 +1,5 @@
 import type { RigDocument } from '../rig/document';
+import { conditionFindings } from './check-conditions';
 import { type CheckStart, motionFindings } from './check-motion';
 import { readDocument } from './check-schema';
 import { nestsTooDeep, structureFindings } from './check-structure';
@@ -21,7 +22,7 @@ const greatestTextLength = 2_000_000;
 export function checkProtocol(document: unknown, rig: RigDocument, start?: CheckStart): Finding[] {
   const read = readDocument(document);
   if (read.document === null) return withoutRepeats(read.findings);
-  const structure = [...structureFindings(read.document, rig), ...notYet(read.document)];
+  const structure = [...structureFindings(read.document, rig), ...conditionFindings(read.document, rig), ...notYet(read.document)];
   const motion = nestsTooDeep(read.document) ? [] : motionFindings(read.document, rig, start);
   const findings = withoutRepeats([...structure, ...motion]);
   return findings.length === 0 && start !== undefined ? planFindings(read.document, rig, start) : findings;

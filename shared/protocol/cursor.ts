@@ -15,6 +15,10 @@ interface CursorFrame {
   pass: number;
   /** For a repeat until a local time: that instant, fixed when the repeat began. */
   deadlineUtcMs: number | null;
+  /** For a repeat that counts good passes: how many so far; absent: as many as passes. */
+  good?: number;
+  /** A dwell of the present pass was not good. */
+  spoilt?: boolean;
 }
 
 /** Where a run stands in its protocol. Plain JSON: it is part of the run's snapshot. */
@@ -38,6 +42,10 @@ export interface CursorMoment {
   utcMs: number;
   /** Turntable angle, deg. */
   angleDeg: number;
+  /** The dwell that has just ended was not good. */
+  notGood?: boolean;
+  /** Relative u of the near−far difference so far; null while it is not known. Absent: a plan, which knows nothing of it. */
+  relativeU?: number | null;
 }
 
 /** The cursor before the first step. */
@@ -56,7 +64,7 @@ export function advanceCursor(
   cursor: CursorState,
   moment: CursorMoment,
 ): { item: PlannedItem | null; cursor: CursorState } {
-  const frames = cursor.frames.map((frame) => ({ ...frame }));
+  const frames = cursor.frames.map((frame) => (moment.notGood === true ? { ...frame, spoilt: true } : { ...frame }));
   for (let decisions = 0; decisions <= greatestStepCount; decisions += 1) {
     const lists = listsOf(plan.protocol.steps, frames);
     const frame = frames[frames.length - 1];
@@ -65,6 +73,7 @@ export function advanceCursor(
     if (step === undefined) {
       if (frames.length === 1) return atEnd(plan, { ...cursor, frames });
       const repeat = lists[lists.length - 2]?.[frames[frames.length - 2]?.next ?? -1] as RepeatStep;
+      Object.assign(frame, { good: (frame.good ?? frame.pass - 1) + (frame.spoilt === true ? 0 : 1), spoilt: false });
       if (anotherPass(repeat, frame, { plan, moment })) Object.assign(frame, { next: 0, pass: frame.pass + 1 });
       else {
         frames.pop();
@@ -121,7 +130,19 @@ function deadlineOf(repeat: RepeatStep, plan: CursorPlan, moment: CursorMoment):
 function anotherPass(repeat: RepeatStep, frame: CursorFrame, context: { plan: CursorPlan; moment: CursorMoment }): boolean {
   if (repeat.atMost !== undefined && frame.pass >= repeat.atMost) return false;
   if (frame.deadlineUtcMs !== null) return passEndsBy(repeat, frame.deadlineUtcMs, context);
-  return frame.pass < (repeat.times ?? 0);
+  if (repeat.until !== undefined && 'relativeStatisticalU' in repeat.until)
+    return frame.pass < leastPasses(repeat) || !isReached(repeat.until.relativeStatisticalU, context);
+  if (repeat.counting !== 'good') return frame.pass < (repeat.times ?? 0);
+  // The most that may come of it: no pass is good before the last one that is allowed.
+  return context.plan.conditions === 'most' || (frame.good ?? frame.pass) < (repeat.times ?? 0);
+}
+
+/** Passes of a repeat until a statistical u that are made in any case. */
+export const leastPasses = ({ atLeast = 20, atMost }: RepeatStep): number => Math.min(atLeast, atMost ?? atLeast);
+
+function isReached(wanted: number, { plan, moment }: { plan: CursorPlan; moment: CursorMoment }): boolean {
+  if (moment.relativeU === undefined) return plan.conditions === 'least';
+  return moment.relativeU !== null && moment.relativeU <= wanted;
 }
 
 /** An instant taken from the controller's stamps may be off the plan by some µs: so near to the deadline counts as on it, ms. */

@@ -1,6 +1,8 @@
 import type { RigDocument } from '../rig/document';
 import type { RepeatStep, Step } from './document';
+import { leastPasses } from './cursor';
 import { homeDurationS, swingMove, UnplayableStep } from './durations';
+import { waitOf } from './wait';
 
 export interface LeastPlan {
   durationS: number;
@@ -10,7 +12,7 @@ export interface LeastPlan {
 
 /**
  * The least time that steps take, s, from a turntable angle in deg (null: not known). A first move from an unknown angle counts as none, a
- * beat as what its swing leaves of it, a repeat until a time or a condition as no pass, and what ends by a condition as no time.
+ * beat as what its swing leaves of it, a repeat until a time as no pass, and what ends by a condition as long as the samples it needs.
  */
 export function leastPlan(steps: readonly Step[], rig: RigDocument, angleDeg: number | null): LeastPlan {
   let plan: LeastPlan = { durationS: 0, angleDeg };
@@ -42,7 +44,9 @@ function afterStep(step: Step, rig: RigDocument, { angleDeg, swingS }: Before): 
       if (step.beat_periods !== undefined) return { durationS: Math.max(0, step.beat_periods * periodS - swingS), angleDeg };
       return { durationS: step.for_s ?? (step.periods ?? 0) * periodS, angleDeg };
     case 'settle':
-      return { durationS: step.for_s ?? 0, angleDeg };
+      return { durationS: step.for_s ?? waitOf(step)?.windowS ?? 0, angleDeg };
+    case 'wait':
+      return { durationS: waitOf(step)?.windowS ?? 0, angleDeg };
     case 'repeat':
       return afterRepeat(step, rig, angleDeg);
     default:
@@ -61,7 +65,9 @@ function afterSwing(step: Extract<Step, { kind: 'swing' }>, rig: RigDocument, an
 }
 
 /** Angles are absolute, so every pass after the first begins as the second does. */
-function afterRepeat({ times, atMost, steps }: RepeatStep, rig: RigDocument, angleDeg: number | null): LeastPlan {
+function afterRepeat(repeat: RepeatStep, rig: RigDocument, angleDeg: number | null): LeastPlan {
+  const { until, atMost, steps } = repeat;
+  const times = until !== undefined && 'relativeStatisticalU' in until ? leastPasses(repeat) : repeat.times;
   if (times === undefined) return { durationS: 0, angleDeg: leastPlan(steps, rig, angleDeg).angleDeg === angleDeg ? angleDeg : null };
   const passes = Math.min(times, atMost ?? times);
   const first = leastPlan(steps, rig, angleDeg);

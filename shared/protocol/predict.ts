@@ -19,7 +19,7 @@ interface Pendulum {
   oscillator: Oscillator;
 }
 
-function pendulumOf(rig: RigDocument): Pendulum | null {
+export function pendulumOf(rig: RigDocument): Pendulum | null {
   const oscillator = oscillatorOf(rig);
   return oscillator === null ? null : { geometry: geometryOf(rig), oscillator };
 }
@@ -179,7 +179,7 @@ function addMove(item: TimelineItem, periodS: number, add: (untilMs: number, ang
   }
 }
 
-function standingAt(pendulum: Pendulum, angleDeg: number): { restRad: number; omega: number } {
+export function standingAt(pendulum: Pendulum, angleDeg: number): { restRad: number; omega: number } {
   const { geometry, oscillator } = pendulum;
   const restRad = equilibriumAt(pendulum, angleDeg);
   const gradient = CODATA_2022_G.value * torqueGradientPerG(geometry, angleDeg * RAD_PER_DEG - restRad);

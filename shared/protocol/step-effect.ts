@@ -2,6 +2,7 @@ import type { RigDocument } from '../rig/document';
 import type { ProtocolDocument, RepeatStep, Step } from './document';
 import { dwellEndUtcMs, homeDurationS, settleEndUtcMs, swingMove, UnplayableStep, waitUntilLocalTime } from './durations';
 import { stationAt } from './stations';
+import { waitOf } from './wait';
 
 export type LeafStep = Exclude<Step, RepeatStep>;
 
@@ -11,6 +12,11 @@ export interface CursorPlan {
   rig: RigDocument;
   /** IANA zone of the lab. */
   timeZone: string;
+  /**
+   * How long what ends by a condition is taken to last. `expected` (default): a wait as long as the samples it needs, a repeat until a
+   * statistical u its greatest number of passes, one that counts good passes as if all were good; `least` and `most`: the bounds.
+   */
+  conditions?: 'least' | 'expected' | 'most';
 }
 
 export interface PlanState {
@@ -22,13 +28,17 @@ export interface PlanState {
 }
 
 /**
- * The state after a step if all goes by plan. A mark takes no time; a step whose end no plan can know (a condition, a person) and
- * the kinds that are not built yet count as none.
+ * The state after a step if all goes by plan. A mark and a proof take no time; what a person ends and
+ * the kinds that are not built yet count as none, a wait for a condition as long as the samples it needs, or as the step's limit where the most is asked for.
  * @throws UnplayableStep where the step cannot be carried out on the rig.
  */
-function stateAfter(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone'>, state: PlanState): PlanState {
+function stateAfter(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone' | 'conditions'>, state: PlanState): PlanState {
   const { rig, timeZone } = plan;
   const at = (utcMs: number, angleDeg = state.angleDeg): PlanState => ({ utcMs, angleDeg, swingStartUtcMs: null });
+  const waited = (of: LeafStep) => {
+    const wait = waitOf(of);
+    return wait === null ? null : state.utcMs + 1000 * (plan.conditions === 'most' ? wait.atMostS : wait.windowS);
+  };
   switch (step.kind) {
     case 'home':
       return at(state.utcMs + homeDurationS(rig, state.angleDeg) * 1000, rig.motion?.homeDeg);
@@ -39,9 +49,11 @@ function stateAfter(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone'>, 
     case 'dwell':
       return at(dwellEndUtcMs(step, rig, { startUtcMs: state.utcMs, swingStartUtcMs: state.swingStartUtcMs }));
     case 'settle':
-      return at(settleEndUtcMs(step, state.utcMs));
+      return at(waited(step) ?? settleEndUtcMs(step, state.utcMs));
+    case 'prompt':
+      return at(state.utcMs + (plan.conditions === 'most' ? 1000 * (step.atMost_s ?? 0) : 0));
     case 'wait':
-      if (!('localTime' in step.until)) return at(state.utcMs);
+      if (!('localTime' in step.until)) return at(waited(step) ?? state.utcMs);
       return at(
         waitUntilLocalTime({ localTime: step.until.localTime, timeZone, utcMs: state.utcMs, ifPast: step.until.ifPast ?? 'continue' })
           .endUtcMs,
@@ -55,7 +67,11 @@ function stateAfter(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone'>, 
  * As `stateAfter`, for drafts and for looking ahead: a step that cannot be carried out is passed over, and a beat whose swing is not known
  * counts from its own start, which is the longest it can be.
  */
-export function stateAfterIfPossible(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone'>, state: PlanState): PlanState {
+export function stateAfterIfPossible(
+  step: LeafStep,
+  plan: Pick<CursorPlan, 'rig' | 'timeZone' | 'conditions'>,
+  state: PlanState,
+): PlanState {
   const beatAlone = step.kind === 'dwell' && step.beat_periods !== undefined && state.swingStartUtcMs === null;
   try {
     return stateAfter(step, plan, beatAlone ? { ...state, swingStartUtcMs: state.utcMs } : state);

@@ -41,14 +41,27 @@ export function withoutSources(rig: RigDocument): RigDocument {
   return { ...rig, sources: { ...rig.sources, shape: 'none' } };
 }
 
+/** What a night is asked for before it is worth running: drift below a tenth of a milliradian an hour over the time that a first look takes. */
+const calm = (windowS: number): Step => ({
+  kind: 'settle',
+  calmWhen: { drift_urad_per_h: 100, window_s: windowS },
+  atMost_s: 5400,
+  otherwise: 'continue',
+});
+const usualCalmS = 600;
+
 const overnight = (rig: RigDocument, name: string, notes: string): ProtocolDocument =>
-  document(name, { notes, ...atClear(rig), steps: [{ kind: 'home' }, swing('near'), ...pair, { kind: 'repeat', times: 16, steps: pair }] });
+  document(name, {
+    notes,
+    ...atClear(rig),
+    steps: [{ kind: 'home' }, swing('near'), ...pair, { kind: 'proof' }, calm(usualCalmS), { kind: 'repeat', times: 16, steps: pair }],
+  });
 
 const nearFar: Template = {
   id: 'near-far',
   name: 'Overnight reversals',
   summary:
-    'The standard night: after a first pair, 16 pairs of a far and a near dwell at a beat of two periods, then the sources turn clear.',
+    'The standard night: a first pair that proves it, a wait until the drift is small, 16 pairs of a far and a near dwell at a beat of two periods, then the sources turn clear.',
   make: (rig) => overnight(rig, 'Overnight reversals', ''),
   rigFor: asItIs,
 };
@@ -60,7 +73,14 @@ const proof: Template = {
   make: () =>
     document('Proof hour', {
       notes: '',
-      steps: [{ kind: 'home' }, swing('near'), ...reversal('far'), ...reversal('near'), ...reversal('far')],
+      steps: [
+        { kind: 'home' },
+        swing('near'),
+        ...reversal('far'),
+        ...reversal('near'),
+        ...reversal('far'),
+        { kind: 'proof', otherwise: 'continue' },
+      ],
     }),
   rigFor: asItIs,
 };
@@ -122,11 +142,21 @@ const fourStation: Template = {
     return document('Four stations, weekend', {
       notes: '',
       ...atClear(rig),
-      steps: [{ kind: 'home' }, swing('near'), ...pair, { kind: 'repeat', times: 23, steps: block }],
+      steps: [
+        { kind: 'home' },
+        swing('near'),
+        ...pair,
+        { kind: 'proof' },
+        calm(restOfHourS(rig)),
+        { kind: 'repeat', times: 23, steps: block },
+      ],
     });
   },
   rigFor: asItIs,
 };
+
+/** Proof pair and wait take an hour together, but the wait no less than usual, s. */
+const restOfHourS = (rig: RigDocument): number => Math.max(usualCalmS, 3600 - 4 * Math.round(rig.measured?.period_s?.value ?? 420));
 
 /** What a turn from station to station leaves of a beat of two periods, s; a turn that cannot be planned counts as none. */
 function restOfBeatS(rig: RigDocument, from: string, to: string): number {
@@ -163,11 +193,29 @@ const emptyControl: Template = {
   rigFor: withoutSources,
 };
 
+const afternoon: Template = {
+  id: 'afternoon',
+  name: 'Teaching afternoon',
+  summary: 'One slot with people in the room: hands clear and predictions handed in, then two pairs; time remains to evaluate.',
+  make: () =>
+    document('Teaching afternoon', {
+      notes: '',
+      steps: [
+        { kind: 'prompt', text: 'Hands clear of the rig, predictions handed in', atMost_s: 1800, otherwise: 'hold' },
+        { kind: 'home' },
+        swing('near'),
+        ...pair,
+        ...pair,
+      ],
+    }),
+  rigFor: asItIs,
+};
+
 /** The built-in templates, in the order in which they are offered. */
-export const templates: readonly Template[] = [nearFar, nearFarShort, proof, scan, still, fourStation, emptyControl];
+export const templates: readonly Template[] = [nearFar, nearFarShort, proof, scan, still, fourStation, afternoon, emptyControl];
 
 /** Built-in templates of the format that make no sense without steps this version does not carry out yet. */
-export const templatesNotYet: readonly string[] = ['shaped', 'afternoon', 'time-of-swing'];
+export const templatesNotYet: readonly string[] = ['shaped', 'time-of-swing'];
 
 /** The template with this id; undefined where there is none. */
 export function templateById(id: string): Template | undefined {

@@ -50,6 +50,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
     importBytes: 4_194_304,
     streamsPerUser: 6,
   },
+  devices: { batchBytes: 1_048_576, batchesPerMinute: 120, samplesPerMinute: 120_000 },
   ...changes,
 });
 
@@ -283,7 +284,6 @@ export class LabServer {
 }
 
 const userIdOf = (role: Role): string => demoPeople.find((one) => one.role === role)?.id ?? '';
-
 /** Home, then near and far for half a minute each: over in a few minutes. */
 export const quickProtocol = (change: Partial<ProtocolDocument> = {}): ProtocolDocument => ({
   formatVersion: 1,

@@ -1,52 +1,50 @@
 import { View } from 'react-native';
 import { useLab } from '@/components/api';
-import { Body, Button, Field, Tabs } from '@/components/ui';
+import { Body, Button, Check, Field, Label, Tabs } from '@/components/ui';
 import { zoneName } from '@/shared/lib/format-time';
 import type { RepeatStep } from '@/shared/protocol/document';
-import { NumberField, wholeFromOne } from './number-field';
+import { NumberField, positive, wholeFromOne } from './number-field';
 import type { StepFormProps } from './step-form';
 
-/** How often: a number of times, or until a time of day in the lab. */
+type Kind = 'times' | 'until' | 'u';
+
+const kindOf = ({ times, until }: RepeatStep): Kind =>
+  times !== undefined ? 'times' : until !== undefined && 'localTime' in until ? 'until' : 'u';
+
+/** How often: a number of times, until a time of day in the lab, or until near minus far is known well enough. */
 export function RepeatForm({ step, onChange, disabled }: StepFormProps<RepeatStep>) {
   const { timeZone } = useLab();
   const { steps, until } = step;
   const kept = { kind: 'repeat', steps, ...(step.label === undefined ? {} : { label: step.label }) } as const;
-  const unbuilt =
-    (until !== undefined && !('localTime' in until)) ||
-    step.counting === 'good' ||
-    step.order === 'shuffled' ||
-    step.atLeast !== undefined ||
-    step.atMost !== undefined;
-  const choose = (kind: 'times' | 'until') =>
-    onChange(kind === 'times' ? { ...kept, times: 8 } : { ...kept, until: { localTime: '06:30' } });
+  const kind = kindOf(step);
+  const choose = (next: Kind) =>
+    onChange(
+      next === 'times'
+        ? { ...kept, times: 8 }
+        : next === 'until'
+          ? { ...kept, until: { localTime: '06:30' } }
+          : { ...kept, until: { relativeStatisticalU: 0.001 }, atLeast: 20, atMost: 40 },
+    );
   return (
     <View className="gap-4">
-      {unbuilt ? (
+      {step.order === 'shuffled' ? (
         <View className="gap-3">
-          <Body>This repeat ends by a condition that this version does not carry out yet.</Body>
-          {disabled ? null : <Button label="Make it a plain repeat" className="self-start" onPress={() => choose('times')} />}
+          <Body>The order of this repeat is shuffled, which this version does not carry out yet.</Body>
+          {disabled ? null : <Button label="Keep the order as written" className="self-start" onPress={() => choose(kind)} />}
         </View>
       ) : null}
       <Tabs
         label="How often"
-        value={step.times === undefined ? 'until' : 'times'}
+        value={kind}
         options={[
-          { value: 'times', label: 'A number of times' },
+          { value: 'times', label: 'Times' },
           { value: 'until', label: 'Until a time' },
+          { value: 'u', label: 'Until u' },
         ]}
         onChange={disabled ? () => undefined : choose}
         testID="repeat-kind"
       />
-      {step.times === undefined ? null : (
-        <NumberField
-          label="Times"
-          value={step.times}
-          refuse={wholeFromOne}
-          onChange={(times) => (times === undefined ? undefined : onChange({ ...step, times }))}
-          disabled={disabled}
-          testID="repeat-times"
-        />
-      )}
+      {step.times === undefined ? null : <TimesFields step={step} onChange={onChange} disabled={disabled} />}
       {until !== undefined && 'localTime' in until ? (
         <Field
           label="Until"
@@ -58,6 +56,93 @@ export function RepeatForm({ step, onChange, disabled }: StepFormProps<RepeatSte
           testID="repeat-until"
         />
       ) : null}
+      {kind === 'u' ? <UFields step={step} onChange={onChange} disabled={disabled} /> : null}
+    </View>
+  );
+}
+
+function without(step: RepeatStep, ...keys: ('counting' | 'atMost' | 'atLeast')[]): RepeatStep {
+  const rest = { ...step };
+  for (const key of keys) delete rest[key];
+  return rest;
+}
+
+interface FieldsProps {
+  step: RepeatStep;
+  onChange: (step: RepeatStep) => void;
+  disabled: boolean;
+}
+
+function TimesFields({ step, onChange, disabled }: FieldsProps) {
+  const good = step.counting === 'good';
+  const count = (asked: boolean) => {
+    const rest = without(step, 'counting', 'atMost');
+    const times = step.times ?? 1;
+    onChange(asked ? { ...rest, counting: 'good', atMost: times + Math.max(2, Math.ceil(times / 4)) } : rest);
+  };
+  return (
+    <View className="gap-4">
+      <NumberField
+        label={good ? 'Good passes' : 'Times'}
+        value={step.times}
+        refuse={wholeFromOne}
+        onChange={(times) => (times === undefined ? undefined : onChange({ ...step, times }))}
+        disabled={disabled}
+        testID="repeat-times"
+      />
+      <Check
+        label="Make up for passes with a dwell that is not good"
+        value={good}
+        onChange={(asked) => (disabled ? undefined : count(asked))}
+        testID="repeat-good"
+      />
+      {good ? <AtMost step={step} onChange={onChange} disabled={disabled} /> : null}
+    </View>
+  );
+}
+
+function AtMost({ step, onChange, disabled }: FieldsProps) {
+  return (
+    <NumberField
+      label="Passes at most"
+      value={step.atMost}
+      refuse={wholeFromOne}
+      onChange={(atMost) => (atMost === undefined ? undefined : onChange({ ...step, atMost }))}
+      disabled={disabled}
+      testID="repeat-at-most"
+    />
+  );
+}
+
+function UFields({ step, onChange, disabled }: FieldsProps) {
+  const { until } = step;
+  const u = until !== undefined && 'relativeStatisticalU' in until ? until.relativeStatisticalU : undefined;
+  return (
+    <View className="gap-4">
+      <NumberField
+        label="Relative u of near minus far"
+        value={u}
+        refuse={positive}
+        onChange={(value) => (value === undefined ? undefined : onChange({ ...step, until: { relativeStatisticalU: value } }))}
+        disabled={disabled}
+        testID="repeat-u"
+      />
+      <NumberField
+        label="Passes at least"
+        value={step.atLeast}
+        optional
+        placeholder="20"
+        refuse={wholeFromOne}
+        onChange={(atLeast) => {
+          const rest = without(step, 'atLeast');
+          onChange(atLeast === undefined ? rest : { ...rest, atLeast });
+        }}
+        disabled={disabled}
+      />
+      <AtMost step={step} onChange={onChange} disabled={disabled} />
+      <Label>
+        From the scatter of the good dwells. Fixed beforehand, with its bounds: stopping when a number pleases is no measurement.
+      </Label>
     </View>
   );
 }

@@ -3,6 +3,8 @@ import { Body, Field, Label } from '@/components/ui';
 import type { Step } from '@/shared/protocol/document';
 import type { RigDocument } from '@/shared/rig/document';
 import { DwellForm } from './dwell-form';
+import { PromptForm } from './prompt-form';
+import { ProofForm } from './proof-form';
 import { RepeatForm } from './repeat-form';
 import { SettleForm } from './settle-form';
 import { SwingForm } from './swing-form';
@@ -46,6 +48,10 @@ function OwnFields({ step, onChange, rig, disabled }: StepFormProps) {
       return <WaitForm step={step} {...common} />;
     case 'repeat':
       return <RepeatForm step={step} {...common} />;
+    case 'proof':
+      return <ProofForm step={step} {...common} />;
+    case 'prompt':
+      return <PromptForm step={step} {...common} />;
     case 'home':
       return <Label>Turns slowly to the edge of the home flag; from then on the position is known.</Label>;
     case 'mark':

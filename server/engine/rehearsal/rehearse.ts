@@ -1,6 +1,7 @@
 import type { ChainedEvent, ChannelSeries, RunStart, SimulatedRun, StepRow } from '@/shared/archive/run-records';
 import { createSimulatedBalance } from '@/shared/physics/simulated-balance';
 import { motionOf } from '@/shared/protocol/durations';
+import type { SampleReader } from '../../interfaces/sample-reader';
 import type { TurntableLink } from '../../interfaces/turntable-link';
 import { MemoryJournal } from '../memory-journal';
 import { RunDriver } from '../run-driver';
@@ -48,14 +49,15 @@ export async function rehearse({ start, startUtcMs }: RehearsalInput, parts: Reh
   const motion = motionOf(rig);
   const clock = new VirtualClock(startUtcMs - PREPARE_MS, parts.settle);
   const controller = parts.createController({ clock, rig: motion, seed: simulated.seed });
+  const deflection = new DeflectionSeries();
   const server = new RehearsalServer(start, {
     ...parts,
     clock,
+    samples: deflection.reader,
     newLink: (epoch) => parts.createLink({ factory: controller.factory, clock, rig: motion, epoch }),
   });
   await clock.advance(PREPARE_MS);
 
-  const deflection = new DeflectionSeries();
   const balance = createSimulatedBalance({ rig, bigG: simulated.trueG, seed: simulated.seed, rateHz: simulated.rateHz, startUtcMs });
   const readout = new ReadoutFaults();
   const sample = () => deflection.append(readout.spoil(balance.advance({ toUtcMs: clock.utcMs(), angleDegAt: controller.trueAngleDegAt })));
@@ -94,6 +96,7 @@ function result(server: RehearsalServer, series: ChannelSeries): Rehearsal {
 
 interface ServerParts extends RehearsalParts {
   clock: VirtualClock;
+  samples: SampleReader;
   newLink(epoch: number): TurntableLink;
 }
 
@@ -161,7 +164,7 @@ class RehearsalServer {
   }
 
   private newDriver(stored: Awaited<ReturnType<RehearsalStore['load']>>): RunDriver {
-    const { clock, sha256 } = this.parts;
+    const { clock, sha256, samples } = this.parts;
     return new RunDriver({
       start: this.start,
       stored,
@@ -170,6 +173,7 @@ class RehearsalServer {
       link: this.link,
       clock,
       sha256,
+      samples,
       armNow: () => null,
       perform: () => undefined,
     });

@@ -255,9 +255,11 @@ function encodeChange({ events, steps, view }: Omit<LiveChange, 'view'> & { view
 /** Rig and protocol went out with the first snapshot: with every change they would be nine tenths of all that is sent. */
 function progressOf(view: RunView): LiveMessages['progress'] {
   const { state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt } = view;
+  const { dwellsGood, waiting, reversal } = view;
   const { dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq } = view;
   return {
     ...{ state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt },
+    ...{ dwellsGood, waiting, reversal },
     ...{ dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq },
   };
 }

@@ -55,7 +55,8 @@ function assertMayArm(services: Services, rig: RigRecord): void {
   const lockedBy = services.locks.lockedBy(rig.id);
   if (lockedBy !== null) throw new ProblemError('locked', lockedBy);
   const driver = services.supervisor.activeOf(rig.id);
-  if (driver !== null && !driver.isOver() && driver.facts().state !== 'held')
+  const facts = driver === null || driver.isOver() ? null : driver.facts();
+  if (facts !== null && facts.state !== 'held' && facts.waiting?.kind !== 'prompt')
     throw new ProblemError('rig-busy', `A run is under way on ${rig.name}. Hold or stop it, then arm the rig.`);
   const controller = services.stations.get(rig.id)?.link.controller() ?? null;
   if (controller === null)

@@ -14,7 +14,7 @@ import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
 import type { Services } from '../services';
 
-const channelViewOf = (channel: store.ChannelRecord): ChannelView => ({
+export const channelViewOf = (channel: store.ChannelRecord): ChannelView => ({
   id: channel.id,
   rigId: channel.rigId,
   name: channel.name,
@@ -22,6 +22,7 @@ const channelViewOf = (channel: store.ChannelRecord): ChannelView => ({
   unit: channel.unit,
   role: channel.role,
   source: channel.source,
+  rateHz: channel.rateHz,
 });
 
 const importViewOf = (file: store.ImportRecord): ImportView => ({

@@ -3,6 +3,7 @@ import { alarmRoutes } from './alarms';
 import { armingRoutes } from './arming';
 import { callRoutes } from './calls';
 import { dataRoutes } from './data';
+import { deviceRoutes } from './devices';
 import { doorRoutes } from './doors';
 import { evaluationRoutes } from './evaluations';
 import { interventionRoutes } from './interventions';
@@ -30,6 +31,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...scheduleRoutes,
   ...doorRoutes,
   ...dataRoutes,
+  ...deviceRoutes,
   ...evaluationRoutes,
   ...workRoutes,
   ...alarmRoutes,

@@ -163,6 +163,16 @@ const actRoutes = [
     return accepted(services, params.runId, answer);
   }),
 
+  mount(goingOn.confirmPrompt, async (context) => {
+    const { params, body, me, membership, services } = context;
+    const driver = await driverOf(services, membership.labId, params.runId);
+    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'confirm');
+    const answer = await driver.requests.confirmPrompt(me.name);
+    assertNothingInTheWay(services, { driver, rigId: rigOf(context, params.runId), answer });
+    auditLater(context, 'run.prompt-confirmed', { runId: params.runId });
+    return accepted(services, params.runId, answer);
+  }),
+
   mount(contracts.stopRun, async (context) => {
     const { params, me, membership, services } = context;
     const found = services.activeRuns.find(membership.labId, params.runId);

@@ -109,7 +109,8 @@ const recordRoutes = [
   mount(contracts.listEvents, async ({ params, query, membership, services }) => {
     const run = await load(services, membership.labId, params.runId);
     const [afterSeq] = decodeCursor(query.cursor, ['number']) ?? [0];
-    const events = await store.readEvents(services.database.db, { labId: run.labId, runId: run.id }, { afterSeq, limit: query.limit + 1 });
+    const page = { afterSeq, limit: query.limit + 1, kind: query.kind };
+    const events = await store.readEvents(services.database.db, { labId: run.labId, runId: run.id }, page);
     return pageFrom(events, query.limit, (event) => [event.seq]);
   }),
 

@@ -37,6 +37,9 @@ describe('what arrives', () => {
       intervention,
       mayResume,
       maySkip,
+      dwellsGood,
+      waiting,
+      reversal,
     } = viewAt(nowUtcMs);
     const same = {
       startedAt,
@@ -50,6 +53,9 @@ describe('what arrives', () => {
       intervention,
       mayResume,
       maySkip,
+      dwellsGood,
+      waiting,
+      reversal,
     };
     const [, row] = rowsAt(nowUtcMs);
     const progress = (lastSeq: number, change: Partial<{ state: 'held'; reason: string }>): LiveMessage => ({

@@ -113,6 +113,7 @@ const testConfig = (stateDir: string, changes: Partial<ServerConfig>): ServerCon
   metricsPort: null,
   logLevel: 'silent',
   limits: { requestsPerMinute: 100_000, interventionsPerMinute: 1000, jsonBytes: 100_000, importBytes: 100_000, streamsPerUser: 6 },
+  devices: { batchBytes: 1000, batchesPerMinute: 10, samplesPerMinute: 100 },
   ...changes,
 });
 

@@ -84,9 +84,11 @@ function reach(state: ChartState, policy: InterruptionPolicy): { snapshot: RunSn
     },
     finished: () => {
       stood();
+      give({ type: 'deadline', at: at(65.1) });
       give({ type: 'deadline', at: at(66.6) });
       give(heard({ kind: 'motion-began', at: at(68), commandId: snapshot.context.ahead?.commandId ?? '', angleDeg: 20.18 }));
       give(heard({ kind: 'motion-ended', at: at(78), commandId: command(), angleDeg: -20.18, cause: 'done' }));
+      give({ type: 'deadline', at: at(135.1) });
       give({ type: 'deadline', at: at(136.6) });
       give({ type: 'deadline', at: at(138) });
       now = 138;

@@ -2,6 +2,7 @@ import { createHash } from 'node:crypto';
 import type { RunStart, StepRow, ChainedEvent } from '@/shared/archive/run-records';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
+import type { SampleReader } from '@/server/interfaces/sample-reader';
 import { type RunStore, type RunWrite, StaleRunError, type StoredRun } from '@/server/interfaces/run-store';
 import { MemoryJournal } from '@/server/engine/memory-journal';
 import { mergeWrites, withAllToPerform } from '@/server/engine/merge-journal';
@@ -110,7 +111,7 @@ export interface Bench {
   restart(afterS: number): Promise<void>;
 }
 
-export function makeBench(start: RunStart = runStart()): Bench {
+export function makeBench(start: RunStart = runStart(), samples?: SampleReader): Bench {
   const clock = new VirtualClock(startUtcMs, settle);
   const link = new FakeLink(clock);
   const store = new MemoryStore(start);
@@ -121,6 +122,7 @@ export function makeBench(start: RunStart = runStart()): Bench {
   const parts = (stored: StoredRun | null): RunDriverParts => ({
     start,
     stored,
+    ...(samples === undefined ? {} : { samples }),
     store,
     journal,
     link,

@@ -34,7 +34,7 @@ test.each([
 });
 
 test('a fault in the engine itself fails the run and sends a stop', async () => {
-  const bench = await underWay(30);
+  const bench = await underWay(64);
   // A snapshot that no transition can come from stands for any defect.
   (bench.driver.state().context as { cursor: unknown }).cursor = null;
   await expectFailed(bench, 'a fault of its own');

@@ -198,24 +198,15 @@ describe('repeats', () => {
 describe('what is not built yet is valid in the format and refused as not-yet', () => {
   test.each<[string, unknown, string]>([
     ['kick', { kind: 'kick', amplitude_urad: 2000 }, '2.kick'],
-    ['proof', { kind: 'proof' }, '2.proof'],
-    ['prompt', { kind: 'prompt', text: 'Hands clear' }, '2.prompt'],
     ['rotate', { kind: 'rotate', period_s: 1800, turns: 2 }, '2.rotate'],
     ['a shaped swing', { kind: 'swing', to: 'near', profile: 'shaped' }, '2.swing'],
-    ['settling until calm', { kind: 'settle', calmWhen: { amplitude_urad: 50, window_s: 900 } }, '2.settle'],
-    ['waiting for a channel', { kind: 'wait', until: { channel: 'box temperature', below: 21 } }, '2.wait'],
     ['a camera frame', { kind: 'mark', label: 'x', frame: true }, '2.mark'],
-    ['repeating until u', { kind: 'repeat', until: { relativeStatisticalU: 0.001 }, atMost: 50, steps: [dwell] }, '2.repeat'],
-    ['counting good passes', { kind: 'repeat', times: 2, counting: 'good', atMost: 5, steps: [dwell] }, '2.repeat'],
     ['shuffling', { kind: 'repeat', times: 2, order: 'shuffled', steps: [repeat(1, dwell)] }, '2.repeat'],
   ])('%s', (_, step, path) => {
     expect(places([home, step])).toEqual([`not-yet ${path}`]);
   });
 
-  test.each([
-    ['goodWhen', { goodWhen: { residual_urad: 40 } }, 'goodWhen'],
-    ['another method', { evaluation: { method: 'modulation' as const } }, 'evaluation'],
-  ])('%s', (_, more, path) => {
+  test.each([['another method', { evaluation: { method: 'modulation' as const } }, 'evaluation']])('%s', (_, more, path) => {
     expect(checkProtocol(protocol([home, dwell], more), demoRigWide)).toEqual([expect.objectContaining({ code: 'not-yet', path })]);
   });
 
@@ -228,10 +219,20 @@ describe('what is not built yet is valid in the format and refused as not-yet', 
             near,
             { kind: 'swing', to: 'far', profile: 'plain' },
             { kind: 'mark', label: 'x', frame: false },
+            dwell,
+            { kind: 'swing', to: 'near' },
+            dwell,
+            { kind: 'proof', size: 0.1, edge_deg: null, otherwise: 'continue' },
+            { kind: 'settle', calmWhen: { amplitude_urad: 50, window_s: 900 }, atMost_s: 3600, otherwise: 'stop' },
+            { kind: 'wait', until: { channel: 'box temperature', below: 21, for_s: 120 }, otherwise: 'continue' },
+            { kind: 'prompt', text: 'Hands clear', atMost_s: 600, otherwise: 'stop' },
             { kind: 'repeat', times: 1, counting: 'all', order: 'as written', steps: [dwell] },
+            { kind: 'repeat', times: 2, counting: 'good', atMost: 5, steps: [dwell] },
+            { kind: 'repeat', until: { relativeStatisticalU: 0.001 }, atMost: 50, steps: [dwell] },
           ],
           {
             onInterruption: 'resume',
+            goodWhen: { residual_urad: 40, channels: [{ channel: 'box temperature', slopeBelow_per_h: 0.3 }] },
             atEnd: { station: 'clear', drivers: 'release' },
             evaluation: { method: 'equilibrium', drift: 'aba', order: 2, channel: 'deflection' },
           },
@@ -241,11 +242,35 @@ describe('what is not built yet is valid in the format and refused as not-yet', 
     ).toEqual([]);
   });
 
-  test('a required bound is asked for as well', () => {
-    expect(places([home, { kind: 'repeat', until: { relativeStatisticalU: 0.001 }, steps: [dwell] }])).toEqual([
-      'field-missing 2.repeat',
-      'not-yet 2.repeat',
-    ]);
+  test('a required bound is asked for', () => {
+    expect(places([home, { kind: 'repeat', until: { relativeStatisticalU: 0.001 }, steps: [dwell] }])).toEqual(['field-missing 2.repeat']);
+    expect(places([home, { kind: 'repeat', times: 3, counting: 'good', steps: [dwell] }])).toEqual(['field-missing 2.repeat']);
+  });
+
+  test.each<[string, unknown[], string]>([
+    [
+      'fewer passes at most than are asked for',
+      [{ kind: 'repeat', times: 8, counting: 'good', atMost: 7, steps: [dwell] }],
+      'bounds-crossed 2.repeat',
+    ],
+    [
+      'a wait that gives up before it can be met',
+      [{ kind: 'wait', until: { channel: 'tilt', below: 1, for_s: 600 }, atMost_s: 599 }],
+      'never-met 2.wait',
+    ],
+    [
+      'a window too short to tell swing from drift',
+      [{ kind: 'settle', calmWhen: { drift_urad_per_h: 100, window_s: 167 } }],
+      'window-short 2.settle',
+    ],
+    ['a proof after dwells on one side only', [near, dwell, { kind: 'proof' }], 'proof-needs-pair 4.proof'],
+    [
+      'a proof that comes before its pair in the first pass',
+      [{ kind: 'repeat', times: 2, steps: [near, dwell, { kind: 'proof' }, { kind: 'swing', to: 'far' }, dwell] }],
+      'proof-needs-pair 2.repeat.3.proof',
+    ],
+  ])('%s is refused', (_, steps, place) => {
+    expect(places([home, ...steps])).toEqual([place]);
   });
 });
 

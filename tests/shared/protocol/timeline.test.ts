@@ -150,7 +150,7 @@ describe('lengths that people who run such rigs plan with', () => {
   test('four stations: the turn takes 33 s and 807 s of the beat are left', () => {
     const items = timelineOf(templateById('four-station')?.make(demoRigWide) as ProtocolDocument).items;
     const turn = items.find((item) => item.kind === 'swing' && item.station === 'nearBack' && item.angleFromDeg === 20.18);
-    const rest = items.find(({ kind }) => kind === 'settle');
+    const rest = items.find(({ kind, station }) => kind === 'settle' && station === 'nearBack');
     expect(((turn?.endUtcMs ?? 0) - (turn?.startUtcMs ?? 0)) / 1000).toBeCloseTo(33, 6);
     expect(((rest?.endUtcMs ?? 0) - (rest?.startUtcMs ?? 0)) / 1000).toBeCloseTo(807, 6);
   });

@@ -1,0 +1,138 @@
+import { useState } from 'react';
+import { View } from 'react-native';
+import { fieldErrors, useLabMutation, wordsOf } from '@/components/api';
+import { Body, Button, Field, Label, ProblemNotice, Sheet, Tabs } from '@/components/ui';
+import { readDecimal } from '@/components/ui/read-decimal';
+import { makeDeviceToken, type StreamChannel } from '@/shared/contracts/devices';
+import type { RigView } from '@/shared/contracts/rigs';
+
+/** Makes a token for a device: what it measures, how often; the token is shown once, with a line to try it. */
+export function DeviceSheet({ rig, onClose }: { rig: RigView; onClose: () => void }) {
+  const [name, setName] = useState('');
+  const [channel, setChannel] = useState<StreamChannel>({ name: 'deflection', role: 'deflection', unit: 'urad', rateHz: 10 });
+  const [rate, setRate] = useState('10');
+  const make = useLabMutation(makeDeviceToken);
+  const made = make.data?.data;
+  const rateHz = readDecimal(rate);
+  const errors = fieldErrors(make.error);
+  const send = () =>
+    make.mutate({ params: { rigId: rig.id }, body: { name: name.trim(), channels: [{ ...channel, rateHz: rateHz ?? 0 }] } });
+  if (made !== undefined) return <Made secret={made.secret} name={made.token.name} channel={channel} onClose={onClose} />;
+  return (
+    <Sheet
+      open
+      title="Add a device"
+      onClose={onClose}
+      testID="device-sheet"
+      footer={
+        <Button
+          kind="primary"
+          size="action"
+          label="Make its token"
+          disabled={name.trim() === '' || channel.name.trim() === '' || channel.unit.trim() === '' || rateHz === null || rateHz <= 0}
+          busy={make.isPending}
+          onPress={send}
+          testID="make-device"
+        />
+      }
+    >
+      <Field label="Device" value={name} onChange={setName} placeholder="Camera tracker" error={errors['name']} testID="device-name" />
+      <Tabs
+        label="What it measures"
+        value={channel.role}
+        options={[
+          { value: 'deflection', label: 'Deflection' },
+          { value: 'environment', label: 'The room' },
+        ]}
+        onChange={(role) =>
+          setChannel(
+            role === 'deflection'
+              ? { ...channel, role, name: 'deflection', unit: 'urad' }
+              : { ...channel, role, name: 'box temperature', unit: 'degC' },
+          )
+        }
+      />
+      <Field
+        label="Channel"
+        value={channel.name}
+        onChange={(text) => setChannel({ ...channel, name: text })}
+        hint="Protocols name it in waits and in what makes a dwell good."
+        error={errors['channels.0.name']}
+        testID="device-channel"
+      />
+      {channel.role === 'deflection' ? (
+        <Tabs
+          label="Unit"
+          value={channel.unit}
+          options={['rad', 'mrad', 'urad', 'm', 'mm'].map((unit) => ({ value: unit, label: unit === 'urad' ? 'µrad' : unit }))}
+          onChange={(unit) => setChannel({ ...channel, unit })}
+        />
+      ) : (
+        <Field
+          label="Unit"
+          value={channel.unit}
+          onChange={(unit) => setChannel({ ...channel, unit })}
+          error={errors['channels.0.unit']}
+          testID="device-unit"
+        />
+      )}
+      <Field
+        label="Samples a second to expect"
+        value={rate}
+        onChange={setRate}
+        type="number"
+        unit="Hz"
+        error={errors['channels.0.rateHz']}
+      />
+      {make.isError ? <ProblemNotice title="No token was made" {...wordsOf(make.error)} /> : null}
+    </Sheet>
+  );
+}
+
+/** The one time that the token is seen. */
+function Made({ secret, name, channel, onClose }: { secret: string; name: string; channel: StreamChannel; onClose: () => void }) {
+  const [copied, setCopied] = useState<'yes' | 'no' | null>(null);
+  const copy = () =>
+    void navigator.clipboard
+      .writeText(secret)
+      .then(() => setCopied('yes'))
+      .catch(() => setCopied('no'));
+  const line = `{"channel": "${channel.name}", "time_utc": "2031-02-14T20:00:00.1Z", "value": 12.3}`;
+  const example = `curl -sS ${window.location.origin}/api/samples \\\n  -H "Authorization: Bearer $TOKEN" \\\n  -H "Content-Type: application/x-ndjson" \\\n  --data-binary '${line}'`;
+  return (
+    <Sheet
+      open
+      mustAnswer
+      title={`The token of ${name}`}
+      onClose={onClose}
+      testID="device-made"
+      footer={<Button kind="primary" size="action" label="I have copied it" onPress={onClose} testID="device-copied" />}
+    >
+      <Body strong>Shown this once: only a hash of it is kept here.</Body>
+      <View className="rounded-action bg-panel2 p-3">
+        <Body size={13} className="break-all font-mono" testID="device-secret">
+          {secret}
+        </Body>
+      </View>
+      {'clipboard' in navigator ? (
+        <Button icon="duplicate" label="Copy" className="self-start" onPress={copy} testID="copy-secret" />
+      ) : null}
+      <Label role="status">
+        {copied === 'yes'
+          ? 'Copied. Put it where only the device can read it.'
+          : copied === 'no'
+            ? 'The browser did not let it be copied: mark the text and copy it.'
+            : 'Put it where only the device can read it. Whoever has it can fill this channel, and do nothing else.'}
+      </Label>
+      <Body strong>Try it</Body>
+      <View className="rounded-action bg-panel2 p-3">
+        <Body size={13} className="break-all font-mono">
+          {example}
+        </Body>
+      </View>
+      <Label>
+        One line for each sample, in UTC with Z. What is sent again is stored once; a line that is wrong is named and nothing is stored.
+      </Label>
+    </Sheet>
+  );
+}

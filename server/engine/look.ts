@@ -1,0 +1,64 @@
+import { judgeDwell, type DwellFacts } from '@/shared/conditions/dwell-verdict';
+import { lookAtWait, type WaitFinding } from '@/shared/conditions/wait-condition';
+import type { RunStart } from '@/shared/archive/run-records';
+import type { Step } from '@/shared/protocol/document';
+import { waitOf } from '@/shared/protocol/wait';
+import type { Instant } from '../interfaces/clock';
+import type { SampleReader } from '../interfaces/sample-reader';
+import type { RunEvent } from './run-context';
+
+/** What the chart asks to be looked up in the samples; the driver answers with `looked`. */
+export type Look =
+  | { kind: 'dwell'; seq: number; fromUtcMs: number; toUtcMs: number; angleDeg: number }
+  | { kind: 'wait'; seq: number; step: Step; fromUtcMs: number; angleDeg: number };
+
+export type Finding =
+  | { kind: 'dwell'; facts: DwellFacts }
+  /** `unsimulated`: a rehearsal has no such channel, and the condition counts as met. */
+  | { kind: 'wait'; seq: number; found: WaitFinding; unsimulated: boolean };
+
+/** Answers a look from the samples that are there at `nowUtcMs`; null where a dwell cannot be judged because no deflection ever came. */
+function lookUp(start: RunStart, look: Look, { reader, nowUtcMs }: { reader: SampleReader; nowUtcMs: number }): Finding | null {
+  const deflection = reader.deflection(start.protocol.evaluation?.channel);
+  return look.kind === 'dwell'
+    ? dwellFinding(start, look, { reader, nowUtcMs, deflection })
+    : waitFinding(start, look, { reader, nowUtcMs, deflection });
+}
+
+interface Eyes {
+  reader: SampleReader;
+  nowUtcMs: number;
+  /** Name of the channel with the deflection. */
+  deflection: string | null;
+}
+
+function dwellFinding(start: RunStart, look: Look & { kind: 'dwell' }, { reader, nowUtcMs, deflection }: Eyes): Finding | null {
+  const { rig, protocol, simulated } = start;
+  const { seq, fromUtcMs, toUtcMs, angleDeg } = look;
+  const window = { fromUtcMs, toUtcMs };
+  const series = deflection === null ? null : reader.read(deflection, window);
+  if (series === null && protocol.goodWhen?.channels === undefined) return null;
+  const facts = judgeDwell({
+    ...{ rig, goodWhen: protocol.goodWhen, seq, fromUtcMs, toUtcMs, angleDeg, nowUtcMs, deflection: series },
+    channel: (name) => reader.read(name, window),
+    simulated: simulated !== null,
+  });
+  return { kind: 'dwell', facts };
+}
+
+function waitFinding(start: RunStart, look: Look & { kind: 'wait' }, { reader, nowUtcMs, deflection }: Eyes): Finding {
+  const { step, seq, fromUtcMs, angleDeg } = look;
+  const wait = waitOf(step);
+  const channel = wait?.channel ?? deflection;
+  const windowMs = 1000 * (wait?.windowS ?? 0);
+  const series = channel === null ? null : reader.read(channel, { fromUtcMs: Math.max(fromUtcMs, nowUtcMs - windowMs), toUtcMs: nowUtcMs });
+  const unsimulated = series === null && start.simulated !== null;
+  const found = lookAtWait(step, { rig: start.rig, angleDeg, sinceUtcMs: fromUtcMs, nowUtcMs, series });
+  return { kind: 'wait', seq, found: unsimulated ? { ...found, met: true } : found, unsimulated };
+}
+
+/** The event that answers a look. */
+export function lookedInto({ start, samples }: { start: RunStart; samples?: SampleReader }, look: Look, at: Instant): RunEvent {
+  const finding = samples === undefined ? null : lookUp(start, look, { reader: samples, nowUtcMs: at.utcMs });
+  return { type: 'looked', at, finding };
+}
