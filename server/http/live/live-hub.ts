@@ -1,10 +1,10 @@
 import type { Response } from 'express';
 import type { ChainedEvent, StepRow } from '@/shared/archive/run-records';
 import type { LiveMessages, RunView } from '@/shared/contracts/runs';
-import type { Cancel, Clock } from '@/server/interfaces/clock';
-import { ProblemError } from '../problem-error';
+import type { Clock } from '@/server/interfaces/clock';
 import type { SignedIn } from '../route-context';
-import { encodeEvent, EventStream } from './event-stream';
+import { encodeEvent } from './event-stream';
+import { type Reader, Readers } from './readers';
 import { RecentChanges } from './recent-changes';
 
 export interface LiveRunKey {
@@ -38,35 +38,35 @@ interface Snapshot {
   encoded: Buffer;
 }
 
-interface Reader {
+interface RunReader extends Reader {
   run: LiveRunKey;
-  me: SignedIn;
-  stream: EventStream;
   /** Changes that came while the gap was being filled; null once it is. */
   waiting: LiveChange[] | null;
   /** Last event sent. */
   sentSeq: number;
 }
 
-const beatMs = 1000;
-const retryMs = 2000;
-const commentEveryBeats = 15;
-const checkEveryBeats = 30;
 /** A longer gap is answered by a snapshot. */
 const longestGap = 1000;
 
 /** All open live streams of this process: filled from the database, then fed by what the engine saves. */
 export class LiveHub {
-  private readonly readers = new Set<Reader>();
+  private readonly readers: Readers<RunReader>;
   /** Since the last beat, by rig. */
   private readonly samples = new Map<string, LiveSamples[]>();
   private readonly recent = new RecentChanges();
   /** By run, what the next reader is shown first; until something changes, or the next beat. */
   private readonly snapshots = new Map<string, Promise<Snapshot | null>>();
-  private beats = 0;
-  private cancelBeat: Cancel | null = null;
 
-  constructor(private readonly parts: { source: LiveSource; clock: Clock; streamsPerUser: number }) {}
+  constructor(private readonly parts: { source: LiveSource; clock: Clock; streamsPerUser: number }) {
+    this.readers = new Readers({
+      ...{ clock: parts.clock, streamsPerUser: parts.streamsPerUser },
+      beatMs: 1000,
+      retryMs: 2000,
+      mayStillRead: (reader, labId) => parts.source.mayStillRead(reader, labId),
+      beat: () => this.beat(),
+    });
+  }
 
   /**
    * Opens a stream on an answer. After `lastEventId` nothing of the chain is missed: the gap is filled from the database,
@@ -74,22 +74,12 @@ export class LiveHub {
    */
   async open(res: Response, stream: { run: LiveRunKey; me: SignedIn; lastEventId: number | null }): Promise<void> {
     const { run, me, lastEventId } = stream;
-    const open = [...this.readers].filter((reader) => reader.me.userId === me.userId).length;
-    if (open >= this.parts.streamsPerUser)
-      throw new ProblemError(
-        'too-many-requests',
-        `You have ${String(open)} live streams open, which is the most there may be. Close one of the other pages.`,
-      );
-    const reader: Reader = { run, me, stream: new EventStream(res), waiting: [], sentSeq: lastEventId ?? 0 };
-    this.readers.add(reader);
-    reader.stream.onClosed(() => this.drop(reader));
-    reader.stream.retry(retryMs);
-    this.keepBeating();
+    const reader = this.readers.add(res, { labId: run.labId, me }, (made) => ({ ...made, run, waiting: [], sentSeq: lastEventId ?? 0 }));
     try {
       await this.fill(reader, lastEventId);
     } catch (error) {
       // Headers are out: ending the stream makes the browser come back and ask again.
-      this.end(reader);
+      this.readers.end(reader);
       throw error;
     }
   }
@@ -113,28 +103,22 @@ export class LiveHub {
 
   /** Keeps new samples of a rig for the next beat. */
   sampled(rigId: string, samples: LiveSamples): void {
-    if (![...this.readers].some(({ run }) => run.rigId === rigId)) return;
+    if (!this.readers.some(({ run }) => run.rigId === rigId)) return;
     this.samples.set(rigId, [...(this.samples.get(rigId) ?? []), samples]);
   }
 
-  /** Ends the streams of a session or of an account. */
   endAccess(ended: { sessionId: string } | { userId: string }): void {
-    for (const reader of [...this.readers]) {
-      const meant = 'sessionId' in ended ? reader.me.session.id === ended.sessionId : reader.me.userId === ended.userId;
-      if (meant) this.end(reader);
-    }
+    this.readers.endAccess(ended);
   }
 
   close(): void {
-    for (const reader of [...this.readers]) this.end(reader);
-    this.cancelBeat?.();
-    this.cancelBeat = null;
+    this.readers.close();
   }
 
-  private async fill(reader: Reader, lastEventId: number | null): Promise<void> {
+  private async fill(reader: RunReader, lastEventId: number | null): Promise<void> {
     const snapshot = await this.snapshotOf(reader.run);
     if (snapshot === null) {
-      this.end(reader);
+      this.readers.end(reader);
       return;
     }
     const { lastSeq, encoded } = snapshot;
@@ -164,7 +148,7 @@ export class LiveHub {
   }
 
   /** Events, then the rows of the step log they speak of: the page may have seen these rows unfinished. */
-  private async fillGap(reader: Reader, gap: { afterSeq: number; lastSeq: number }): Promise<void> {
+  private async fillGap(reader: RunReader, gap: { afterSeq: number; lastSeq: number }): Promise<void> {
     const kept = this.recent.between(reader.run.runId, gap);
     if (kept !== null) {
       for (const change of kept) sendGap(reader, change);
@@ -177,25 +161,13 @@ export class LiveHub {
     sendGap(reader, { events, steps: touched.size === 0 ? [] : await source.steps(reader.run, [...touched]) });
   }
 
-  private keepBeating(): void {
-    if (this.cancelBeat !== null || this.readers.size === 0) return;
-    this.cancelBeat = this.parts.clock.after(beatMs, () => {
-      this.cancelBeat = null;
-      this.beat();
-      this.keepBeating();
-    });
-  }
-
   private beat(): void {
-    this.beats += 1;
     this.snapshots.clear();
     const texts = new Map<string, Buffer>();
     for (const reader of this.readers) {
       const text = texts.get(reader.run.runId) ?? this.beatOf(reader.run);
       texts.set(reader.run.runId, text);
       reader.stream.send(text);
-      if (this.beats % commentEveryBeats === 0) reader.stream.comment('still here');
-      if (this.beats % checkEveryBeats === 0) void this.check(reader);
     }
     this.samples.clear();
   }
@@ -210,26 +182,9 @@ export class LiveHub {
     const { source, clock } = this.parts;
     return encodeEvent('beat', { serverAt: new Date(clock.utcMs()).toISOString(), ...source.beat(run) }, null);
   }
-
-  private async check(reader: Reader): Promise<void> {
-    try {
-      if (!(await this.parts.source.mayStillRead(reader.me, reader.run.labId))) this.end(reader);
-    } catch {
-      // The database is away: who was let in stays in until it can be asked again.
-    }
-  }
-
-  private end(reader: Reader): void {
-    this.drop(reader);
-    reader.stream.end();
-  }
-
-  private drop(reader: Reader): void {
-    this.readers.delete(reader);
-  }
 }
 
-function sendChange(reader: Reader, change: LiveChange, whole = () => Buffer.from(encodeChange(change))): void {
+function sendChange(reader: RunReader, change: LiveChange, whole = () => Buffer.from(encodeChange(change))): void {
   const { events, steps, view } = change;
   const fresh = events.filter(({ seq }) => seq > reader.sentSeq);
   reader.sentSeq = Math.max(reader.sentSeq, ...fresh.map(({ seq }) => seq));
@@ -239,7 +194,7 @@ function sendChange(reader: Reader, change: LiveChange, whole = () => Buffer.fro
 }
 
 /** What came while the page was away. */
-function sendGap(reader: Reader, { events, steps }: Omit<LiveChange, 'view'>): void {
+function sendGap(reader: RunReader, { events, steps }: Omit<LiveChange, 'view'>): void {
   reader.stream.send(encodeChange({ events, steps, view: null }));
   reader.sentSeq = events.at(-1)?.seq ?? reader.sentSeq;
 }
