@@ -5,6 +5,8 @@
  */
 import { readdirSync } from 'node:fs';
 import { join } from 'node:path';
+import { startCluster } from './lib/cluster.mjs';
+import { ensureDebianPackages } from './lib/debian.mjs';
 import { ensureNodeModules } from './lib/node-modules.mjs';
 import { root } from './lib/paths.mjs';
 import { pass } from './lib/run.mjs';
@@ -23,10 +25,16 @@ const strange = names.filter((name) => !known.includes(name));
 if (strange.length > 0) giveUp(`no soak called ${strange.join(', ')}; there are: ${known.join(', ')}`);
 
 await ensureNodeModules();
+const chosen = names.length > 0 ? names : known;
+const onDatabase = chosen.some((name) => ['r3', 'r5'].includes(name));
+if (onDatabase) await ensureDebianPackages(['postgresql']);
+const cluster = onDatabase ? await startCluster('bench') : null;
+const env = { ...process.env, ...(cluster === null ? {} : { EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres') }) };
 let code = 0;
-for (const name of names.length > 0 ? names : known) {
-  const ended = await pass(process.execPath, ['--import', 'tsx', join(folder, `${name}.ts`), ...options], { cwd: root, env: process.env });
+for (const name of chosen) {
+  const ended = await pass(process.execPath, ['--import', 'tsx', join(folder, `${name}.ts`), ...options], { cwd: root, env });
   if (ended !== 0) say(`The soak ${name} failed.`);
   code ||= ended;
 }
+if (cluster !== null && !cluster.wasRunning) await cluster.stop();
 process.exit(code);

@@ -12,6 +12,9 @@ const names: Record<string, string> = {
   slipDeg: 'slip',
   slipSteps: 'slip in microsteps',
   toleranceDeg: 'tolerance',
+  edge: 'motion',
+  spanS: 'somewhere within',
+  takenUpBy: 'by',
   sha256: 'SHA-256',
 };
 

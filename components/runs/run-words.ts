@@ -104,6 +104,9 @@ const kinds: Record<string, string> = {
   finished: 'Finished',
   failed: 'Failed',
   archived: 'Archived',
+  'edge-not-told': 'Not measured: the controller never told of this edge of a motion',
+  'home-edge': 'Passed the home edge',
+  'server-restarted': 'Taken up by a server',
 };
 
 /** The kind of an event as words: `link-lost` → `Link lost`. */

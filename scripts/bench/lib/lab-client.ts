@@ -40,8 +40,14 @@ export class LabClient {
     return id;
   }
 
-  /** Waits until the simulated rig of a server that has just begun is ready for a start, signs its cautions and arms it for 12 h. The server's exit delay is short. */
-  async arm(): Promise<void> {
+  /**
+   * Waits until the rig of a server that has just begun is ready for a start, signs its cautions and arms it for 12 h. The key of a simulated rig
+   * is virtual and its exit delay short; of another, `turnKey` turns it and `patienceMs` is longer than its exit delay.
+   */
+  async arm({
+    turnKey,
+    patienceMs: patience = patienceMs,
+  }: { turnKey?: (on: boolean) => Promise<void>; patienceMs?: number } = {}): Promise<void> {
     const rig = `/labs/${demoIds.lab}/rigs/${demoIds.rig}`;
     await this.patiently('the link of the demo rig', async () => {
       const { live } = (await this.get(rig)).body as { live: { condition: string } };
@@ -51,13 +57,13 @@ export class LabClient {
     await this.post(`${rig}/cautions`, { version: cautionsVersion });
     await this.post(`${rig}/arm`, { name: 'Ilse Marrowby', until });
     for (const armKey of ['off', 'on']) {
-      await this.post(`${rig}/virtual`, { armKey });
+      await (turnKey === undefined ? this.post(`${rig}/virtual`, { armKey }) : turnKey(armKey === 'on'));
       await this.patiently('the arm key', async () => {
         const { live } = (await this.get(rig)).body as { live: { armKey: boolean } };
         return live.armKey === (armKey === 'on') || null;
       });
     }
-    await this.patiently('the exit delay', async () => ((await this.get(rig)).body as { arm: object | null }).arm);
+    await this.patiently('the exit delay', async () => ((await this.get(rig)).body as { arm: object | null }).arm, patience);
   }
 
   /** Starts the first revision of a protocol on the demo rig as soon as the server lets it, and waits until it runs. Returns the run's id. */
@@ -89,9 +95,9 @@ export class LabClient {
   }
 
   /** Looks again and again; what is refused may be let in the next time. */
-  private async patiently<T>(what: string, look: () => Promise<T | null>): Promise<T> {
+  private async patiently<T>(what: string, look: () => Promise<T | null>, forMs = patienceMs): Promise<T> {
     let why: unknown = null;
-    for (const began = performance.now(); performance.now() - began < patienceMs;) {
+    for (const began = performance.now(); performance.now() - began < forMs;) {
       try {
         const found = await look();
         if (found !== null) return found;

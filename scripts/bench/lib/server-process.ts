@@ -49,6 +49,10 @@ export class ServerProcess {
     return new ServerProcess(child, address);
   }
 
+  signal(signal: 'SIGSTOP' | 'SIGCONT'): void {
+    this.child.kill(signal);
+  }
+
   /** Ends the process and waits until it is gone. */
   async end(signal: 'SIGTERM' | 'SIGKILL' = 'SIGTERM'): Promise<void> {
     if (this.child.exitCode !== null || this.child.signalCode !== null) return;

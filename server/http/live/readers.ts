@@ -56,6 +56,10 @@ export class Readers<R extends Reader> {
     return this.open.values();
   }
 
+  get size(): number {
+    return this.open.size;
+  }
+
   some(holds: (reader: R) => boolean): boolean {
     for (const reader of this.open) if (holds(reader)) return true;
     return false;

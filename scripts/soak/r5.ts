@@ -1,0 +1,108 @@
+import { demoIds } from '@/db/demo/seed';
+import { LabClient, pause } from '../bench/lib/lab-client';
+import { ServerProcess } from '../bench/lib/server-process';
+import { soak } from './report';
+import { countOf, judged, listen, withRealNight, type RealNight } from './run/real-night';
+
+/**
+ * Three servers on one database and one controller, which hears all of them: at some instant the one that drives is frozen (SIGSTOP) for 1 to 10 s,
+ * is killed, or every connection to the controller breaks; 200 times, or 5 000 as the second figure (`--rounds N`). The controller obeys one epoch
+ * at a time, and another server has the rig within 5 s of the end of its driver.
+ */
+const FIRST = 200;
+const SECOND = 5_000;
+const SERVERS = 3;
+const LEASE_S = 3;
+const TAKEN_OVER_WITHIN_S = 5;
+const PATIENCE_MS = 30_000;
+const deeds = ['freeze', 'kill', 'cut'] as const;
+
+/** Looks at the living servers until one drives the rig with a line that answers. */
+async function driverOf(servers: readonly ServerProcess[], { cookie }: RealNight): Promise<ServerProcess> {
+  for (const began = performance.now(); performance.now() - began < PATIENCE_MS; await pause(50)) {
+    for (const server of servers) {
+      const { body } = await new LabClient(server.address, cookie).get(`/labs/${demoIds.lab}/rigs/${demoIds.rig}`);
+      if ((body as { live: { condition: string } }).live.condition === 'ready') return server;
+    }
+  }
+  throw new Error('nobody drives the rig');
+}
+
+async function until(holds: () => boolean, withinMs: number): Promise<boolean> {
+  for (const began = performance.now(); !holds(); await pause(10)) if (performance.now() - began > withinMs) return false;
+  return true;
+}
+
+interface Round {
+  number: number;
+  servers: ServerProcess[];
+  takeoversS: number[];
+}
+
+/** What happens to the one that drives; the servers that are there afterwards. */
+async function round(night: RealNight, { number, servers, takeoversS }: Round): Promise<ServerProcess[]> {
+  const { controller, cookie, runId } = night;
+  await pause(300 + ((number * 0.618) % 1) * 6_000);
+  const driver = await driverOf(servers, night);
+  await listen(night, driver);
+  const last = Math.max(...night.told.keys());
+  const others = servers.filter((server) => server !== driver);
+  const [epoch, beganMs] = [controller.epoch, performance.now()];
+  const takenOver = async () => {
+    if (!(await until(() => controller.epoch > epoch, PATIENCE_MS)))
+      controller.violations.push(`round ${number}: nobody took the rig over`);
+    else takeoversS.push((performance.now() - beganMs) / 1000);
+  };
+  let left = servers;
+  switch (deeds[number % deeds.length]) {
+    case 'freeze': {
+      const frozenS = 1 + ((number * 0.414) % 1) * 9;
+      driver.signal('SIGSTOP');
+      const asleep = pause(1000 * frozenS).then(() => driver.signal('SIGCONT'));
+      // One that wakes in time may have kept its lease; later there must be another.
+      if (frozenS > LEASE_S + 1) await takenOver();
+      await asleep;
+      break;
+    }
+    case 'kill':
+      await driver.end('SIGKILL');
+      await takenOver();
+      left = [...others, await ServerProcess.start(night.setting(number + SERVERS))];
+      break;
+    default:
+      controller.cutAll();
+  }
+  const next = await driverOf(left, night);
+  await new LabClient(next.address, cookie).until(
+    runId,
+    ({ state, lastSeq, current }) => state === 'running' && lastSeq > last && current !== null,
+  );
+  return left;
+}
+
+soak('r5', (args) =>
+  withRealNight(async (night, first) => {
+    const rounds = countOf(args, { first: FIRST, second: SECOND });
+    let servers = [first];
+    try {
+      for (let number = 1; number < SERVERS; number += 1) servers.push(await ServerProcess.start(night.setting(number)));
+      const takeoversS: number[] = [];
+      for (let number = 0; number < rounds; number += 1) servers = await round(night, { number, servers, takeoversS });
+      const violations = await judged(night, await driverOf(servers, night));
+      const slowest = Math.max(0, ...takeoversS);
+      if (slowest > TAKEN_OVER_WITHIN_S) violations.push(`the slowest takeover took ${slowest.toFixed(1)} s`);
+      const { motions, epoch } = night.controller;
+      return {
+        ok: violations.length === 0,
+        rounds,
+        motions,
+        epoch,
+        takeovers: takeoversS.length,
+        slowestTakeoverS: slowest,
+        violations,
+      };
+    } finally {
+      await Promise.all(servers.map((server) => server.end()));
+    }
+  }),
+);

@@ -1,0 +1,74 @@
+import { mkdtempSync, rmSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { rigLinks } from '@/db/schema';
+import { sha256Hex } from '@/server/evaluation/sha256';
+import { verifyChain } from '@/shared/archive/chain';
+import type { ChainedEvent } from '@/shared/archive/run-records';
+import { withDatabase } from '../../bench/lib/fresh-database';
+import { LabClient } from '../../bench/lib/lab-client';
+import { addMembers, seedLab } from '../../bench/lib/people';
+import { ServerProcess, type ServerSetting } from '../../bench/lib/server-process';
+import { eventsOf, swings } from '../../bench/lib/swings';
+import { WatchedController } from './watched-controller';
+
+/** A run of swings on a real database and on a controller that outlives the servers, with what it has told so far. */
+export interface RealNight {
+  setting(number?: number): ServerSetting;
+  cookie: string;
+  controller: WatchedController;
+  runId: string;
+  told: Map<number, ChainedEvent>;
+}
+
+/** The exit delay of a rig that stands in a room is 2 min. */
+const armPatienceMs = 150_000;
+
+/** Begins such a run under one server, gives both to `work`, which has the server from then on, and tidies up. */
+export function withRealNight<T>(work: (night: RealNight, first: ServerProcess) => Promise<T>): Promise<T> {
+  const folder = mkdtempSync(join(tmpdir(), 'evenfall-soak-night-'));
+  return withDatabase(async (database) => {
+    const controller = await WatchedController.start();
+    try {
+      await seedLab(database);
+      const settings = { kind: 'tcp' as const, host: '127.0.0.1', port: controller.port, mode: 'raw' as const, baudRate: 115_200 as const };
+      await database.connection.db.update(rigLinks).set({ settings });
+      const [cookie] = await addMembers(database, 'operator');
+      const setting = (number = 0) => ({
+        databaseUrl: database.url,
+        stateDir: join(folder, String(number)),
+        env: { EVENFALL_LOG_LEVEL: 'silent' },
+      });
+      const first = await ServerProcess.start(setting());
+      const lab = new LabClient(first.address, cookie);
+      await lab.arm({ turnKey: async (on) => controller.turnArmKey(on), patienceMs: armPatienceMs });
+      const runId = await lab.start(await lab.issue(swings));
+      return await work({ setting, cookie, controller, runId, told: new Map() }, first);
+    } finally {
+      controller.end();
+    }
+  }).finally(() => rmSync(folder, { recursive: true, force: true }));
+}
+
+/** Keeps what the run tells now: none of it may be gone later. */
+export async function listen({ cookie, runId, told }: RealNight, server: ServerProcess): Promise<void> {
+  for (const event of await eventsOf(new LabClient(server.address, cookie), runId)) told.set(event.seq, event);
+}
+
+/** What is wrong with the record at the end. */
+export async function judged(night: RealNight, server: ServerProcess): Promise<string[]> {
+  const { cookie, runId, told, controller } = night;
+  const events = await eventsOf(new LabClient(server.address, cookie), runId);
+  const kept = new Map(events.map(({ seq, hash }) => [seq, hash]));
+  const lost = [...told.values()].filter(({ seq, hash }) => kept.get(seq) !== hash);
+  return [
+    ...controller.violations,
+    ...(verifyChain(events, sha256Hex).valid ? [] : ['the chain does not hold']),
+    ...(lost.length === 0 ? [] : [`${lost.length} events that were told are lost, the first of them ${lost[0]?.seq ?? 0}`]),
+  ];
+}
+
+export const countOf = (args: readonly string[], { first, second }: { first: number; second: number }): number => {
+  const at = args.indexOf('--rounds');
+  return at >= 0 ? Number(args[at + 1]) : args.includes('--second') ? second : first;
+};
