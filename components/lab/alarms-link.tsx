@@ -6,8 +6,9 @@ import { listAlarms } from '@/shared/contracts/alarms';
 
 /** The way to the alarms, also while none stands. */
 export function AlarmsLink() {
-  const items = useLabQuery(listAlarms).data?.data.items ?? [];
-  const count = items.filter(isShown).length;
+  const items = useLabQuery(listAlarms).data?.data.items;
+  const count = items?.filter(isShown).length ?? 0;
+  const words = items === undefined ? '…' : count === 0 ? 'none stands' : count === 1 ? 'one stands' : `${String(count)} stand`;
   return (
     <Link
       href={'/alarms' as Href}
@@ -19,7 +20,7 @@ export function AlarmsLink() {
       <Body strong className="flex-1">
         Alarms
       </Body>
-      <Label>{count === 0 ? 'none stands' : count === 1 ? 'one stands' : `${String(count)} stand`}</Label>
+      <Label>{words}</Label>
       <Icon name="forward" size={18} tone="dim" />
     </Link>
   );

@@ -64,6 +64,8 @@ export function Screen({
         <ScrollView
           role="complementary"
           aria-label="Details"
+          // It may scroll and hold nothing that a keyboard can reach.
+          tabIndex={0}
           className="w-[400px] flex-none border-l border-line"
           contentContainerClassName="gap-4 p-5 pb-8"
         >

@@ -47,6 +47,11 @@ export class ActiveRuns {
     return found.map(({ run, driver }) => liveSummaryOf(run, driver.facts()));
   }
 
+  /** All runs that this process drives. */
+  all(): ActiveRun[] {
+    return [...this.byId.values()];
+  }
+
   /** Labs with a run that this process drives. */
   labIds(): string[] {
     return [...new Set([...this.byId.values()].map((run) => run.labId))];

@@ -1,7 +1,7 @@
 import type { MailPort } from '../interfaces/mail';
 import type { PushMessage, PushPort } from '../interfaces/push';
 import type { Database } from '../store/database';
-import { notePushed, pushDevicesOf, removePushDevice } from '../store/push-devices';
+import { notePushed, pushDevicesOf, removePushDevice, type PushDeviceRecord } from '../store/push-devices';
 
 export interface TellParts {
   db: Database;
@@ -34,24 +34,34 @@ const wordsOf = (error: unknown) => oneLine(error instanceof Error ? error.messa
 
 /** Tells a person by every means there is: push is best effort and never alone. Says what became of each; never rejects for a message that did not go. */
 export async function tellPerson(parts: TellParts, person: { userId: string; email: string }, message: Message): Promise<Told[]> {
-  const [pushed, mailed] = await Promise.all([pushTo(parts, person.userId, message), mailTo(parts, person.email, message)]);
+  const devices = await pushDevicesOf(parts.db, person.userId);
+  return tellByHand(parts, { email: person.email, devices }, message);
+}
+
+/** The same where the devices are known: no database is needed. */
+export async function tellByHand(
+  parts: TellParts,
+  { email, devices }: { email: string; devices: readonly PushDeviceRecord[] },
+  message: Message,
+): Promise<Told[]> {
+  const [pushed, mailed] = await Promise.all([pushTo(parts, devices, message), mailTo(parts, email, message)]);
   return [...pushed, mailed];
 }
 
-async function pushTo({ db, push, clock }: TellParts, userId: string, message: Message): Promise<Told[]> {
-  const devices = await pushDevicesOf(db, userId);
+async function pushTo({ db, push, clock }: TellParts, devices: readonly PushDeviceRecord[], message: Message): Promise<Told[]> {
   if (devices.length === 0) return [{ means: 'push', outcome: 'not-set-up', detail: 'no browser takes push messages for this person' }];
   const { title, path, tag, quiet } = message;
   const short: PushMessage = { title, body: (message.paragraphs[0] ?? '').slice(0, 300), path, tag, quiet };
   return Promise.all(
     devices.map(async (device): Promise<Told> => {
       try {
-        if ((await push.send(device, short)) === 'gone') {
-          await removePushDevice(db, device);
-          return { means: 'push', outcome: 'failed', detail: `${device.device}: takes no messages any more, forgotten` };
-        }
-        await notePushed(db, device, clock.utcMs());
-        return { means: 'push', outcome: 'sent', detail: device.device };
+        const outcome = await push.send(device, short);
+        // What is noted about a browser must not undo what was sent.
+        const noting = outcome === 'gone' ? removePushDevice(db, device) : notePushed(db, device, clock.utcMs());
+        noting.catch(() => undefined);
+        return outcome === 'gone'
+          ? { means: 'push', outcome: 'failed', detail: `${device.device}: takes no messages any more, forgotten` }
+          : { means: 'push', outcome: 'sent', detail: device.device };
       } catch (error) {
         return { means: 'push', outcome: 'failed', detail: `${device.device}: ${wordsOf(error)}` };
       }

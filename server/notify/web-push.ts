@@ -17,7 +17,10 @@ const lastsS = 4 * 3600;
 
 /** Push messages after RFC 8030, encrypted after RFC 8291, signed after RFC 8292; the key is made once for all server processes. */
 export function createWebPush({ db, outgoing, subject, nowUtcMs }: PushParts): PushPort {
-  const keys = () => sharedSecret(db, { name: 'vapid', make: () => webPush.generateVAPIDKeys(), nowUtcMs: nowUtcMs() });
+  let known: webPush.VapidKeys | null = null;
+  // Kept in memory: messages go out while the database is away.
+  const keys = async () =>
+    (known ??= await sharedSecret(db, { name: 'vapid', make: () => webPush.generateVAPIDKeys(), nowUtcMs: nowUtcMs() }));
   return {
     publicKey: async () => (await keys()).publicKey,
     send: async ({ endpoint, p256dh, auth }, message) => {

@@ -129,7 +129,7 @@ async function advance(tx: Transaction, row: AlarmRecord, event: AlarmEvent): Pr
   const after = one(await tx.update(alarms).set(change).where(own).returning());
   await writeHistory(tx, after, { facts, event });
   if (raised) await askToTell(tx, after, event.utcMs);
-  else if (facts.includes('acknowledged') || facts.includes('returned')) await askToTellOver(tx, after, event.utcMs);
+  else if (facts.includes('acknowledged') || wentUnseen(facts, after)) await askToTellOver(tx, after, event.utcMs);
   return { ok: true, alarm: after };
 }
 
@@ -205,6 +205,10 @@ async function askToTell(tx: Transaction, alarm: AlarmRecord, utcMs: number): Pr
     ...{ labId, nowUtcMs: utcMs, dueAtUtcMs: waits ? morningUtcMs(utcMs, { morningAt, timeZone }) : utcMs },
   });
 }
+
+/** The condition went away before anybody acknowledged: nobody need get up any more. */
+const wentUnseen = (facts: readonly AlarmFact[], { state }: AlarmRecord) =>
+  facts.includes('returned') && state === 'returned-unacknowledged';
 
 /** Whoever was rung hears that it is over. */
 async function askToTellOver(tx: Transaction, { labId, id: alarmId, rings, snapshot }: AlarmRecord, nowUtcMs: number): Promise<void> {

@@ -1,4 +1,5 @@
 import { demoIds } from '@/db/demo/seed';
+import { jobs } from '@/db/schema';
 import { sizes, type Size } from '../support/browser';
 import { chapters, Hand } from './support/hand';
 import { labOfThisFile } from './support/lab';
@@ -100,6 +101,22 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.tapsOn('History', 'radio');
     await hand.reads('alarm-history', /Acknowledged: Interlock or door opened, by Ottilie Vanterpool/);
     await hand.shoots('alarms-history');
+  });
+
+  chapter('work that was given up is shown to owners, who have it tried again', async () => {
+    await lab()
+      .server.services.database.db.insert(jobs)
+      .values({
+        ...{ labId: demoIds.lab, kind: 'mail.schedule', payload: {}, state: 'given-up', attempts: 8, maxAttempts: 8 },
+        ...{ lastError: '550 5.1.1 no such user here', dueAt: 0, createdAt: Date.now(), finishedAt: Date.now() },
+      });
+    await hand.goes('/lab', 'lab-screen');
+    await hand.reads('given-up-job', /Mail about a scheduled start.*550 5\.1\.1.*8 tries/);
+    await hand.at('given-up-job').scrollIntoViewIfNeeded();
+    await hand.shoots('given-up-job');
+    await hand.taps('retry-job');
+    await hand.sees('It is tried again.');
+    await hand.at('given-up-job').waitFor({ state: 'detached' });
   });
 
   chapter('a channel gets a limit, and the review of a start says whom it rings', async () => {

@@ -5,13 +5,15 @@ import type { Cancel } from '../../interfaces/clock';
 import type { RigStation } from '../../interfaces/rig-stations';
 import type { LinkEvent } from '../../interfaces/turntable-link';
 import { actOnAlarm, reportCondition, type AlarmPlace } from '../../store/alarms';
-import { dueAlarms, metAlarms } from '../../store/alarms-read';
+import { dueAlarms, metAlarms, standingAlarms } from '../../store/alarms-read';
+import { writeHops } from '../../store/calls';
 import { limitsOfRig } from '../../store/channel-limits';
 import { allRigs, type RigRecord } from '../../store/rigs';
 import { channelsOfRun, lastSampleUtcMs } from '../../store/runs-read';
 import type { Services } from '../services';
 import { excursionCondition, lateCondition, limitConditions } from './channel-conditions';
-import { conditionsOf, type Condition } from './rig-conditions';
+import { OutageCall } from './outage-call';
+import { conditionsOf, isSlow, isWatched, type Condition } from './rig-conditions';
 
 /** How often the rigs are looked at when nothing happens, ms. */
 const usualPaceMs = 5_000;
@@ -33,7 +35,8 @@ const keyOf = ({ code, subject }: { code: string; subject: string }) => `${code}
 interface Known {
   /** Those that the database believes to hold, by kind and subject; null before it was asked. */
   met: Set<string> | null;
-  slow: Condition[];
+  /** What the last look into the database found; null before there was one. */
+  slow: Condition[] | null;
 }
 
 /**
@@ -50,7 +53,11 @@ export class AlarmWatch {
   private stopped = false;
   private last: Promise<unknown> = Promise.resolve();
 
-  constructor(private readonly parts: WatchParts) {}
+  private readonly outage: OutageCall;
+
+  constructor(private readonly parts: WatchParts) {
+    this.outage = new OutageCall(parts.services);
+  }
 
   start(): void {
     this.parts.services.supervisor.onChange((driver, change) => this.runChanged(driver, change));
@@ -60,12 +67,14 @@ export class AlarmWatch {
   stop(): void {
     this.stopped = true;
     this.cancel();
+    this.outage.stop();
   }
 
   /** The database does not answer since then; null: it does again. */
   noteDatabase(sinceUtcMs: number | null): void {
     const since = this.awaySinceUtcMs;
     this.awaySinceUtcMs = sinceUtcMs;
+    if (sinceUtcMs !== null && since === null) this.outage.begin();
     if (sinceUtcMs === null && since !== null) this.soon(() => this.tellOutage(since));
   }
 
@@ -89,11 +98,14 @@ export class AlarmWatch {
     const slow = this.looks % slowEvery === 1;
     const rigs = await allRigs(services.database.db);
     const own = rigs.filter(({ id }) => services.stations.get(id) !== null);
+    // What another process drives meanwhile is known to it alone.
+    for (const { id } of rigs) if (!own.some((rig) => rig.id === id)) this.known.delete(id);
     for (const rig of own) {
       if (slow) await this.lookSlowly(rig);
       await this.lookAt(rig.labId, rig.id);
     }
     if (slow) await this.lookAtDisk([...new Set(own.map(({ labId }) => labId))]);
+    if (slow) await this.outage.refresh();
     await this.passTime();
   }
 
@@ -143,11 +155,12 @@ export class AlarmWatch {
           : { id: facts.runId, state: facts.state, reason: facts.reason, reasonCode: facts.reasonCode, startedUtcMs: facts.startedAtUtcMs },
       quarantined: quarantined === null ? null : { runId: quarantined.start.runId, why: quarantined.why },
       link: station.link.health(),
+      linkWasReady: station.link.controller() !== null,
       open: this.open.get(rigId) ?? { interlock: false, supply: false },
       deflectionUtcMs: await this.deflectionUtcMs(labId, facts?.runId ?? null, station),
     });
     const lockedBy = facts === null ? services.locks.lockedBy(rigId) : null;
-    await this.settle({ labId, rigId }, { known, found: [...found, ...known.slow], suppressedWhy: lockedBy });
+    await this.settle({ labId, rigId }, { known, found: [...found, ...(known.slow ?? [])], suppressedWhy: lockedBy });
   }
 
   private async lookSlowly(rig: RigRecord): Promise<void> {
@@ -204,7 +217,7 @@ export class AlarmWatch {
 
   private async knownOf(labId: string, rigId: string | null): Promise<Known> {
     const key = rigId ?? labId;
-    const known = this.known.get(key) ?? { met: null, slow: [] };
+    const known = this.known.get(key) ?? { met: null, slow: null };
     this.known.set(key, known);
     known.met ??= new Set(
       (await metAlarms(this.parts.services.database.db, labId, rigId)).filter(({ snapshot }) => snapshot.met).map(keyOf),
@@ -229,7 +242,13 @@ export class AlarmWatch {
     }
     for (const key of [...met]) {
       const [code = '', ...subject] = key.split(' ');
-      if (found.some((one) => keyOf(one) === key) || !isWatched(code) || (only !== undefined && !only.includes(code))) continue;
+      if (
+        found.some((one) => keyOf(one) === key) ||
+        !isWatched(code) ||
+        (known.slow === null && isSlow(code)) ||
+        (only !== undefined && !only.includes(code))
+      )
+        continue;
       await this.report({ ...at, code, subject: subject.join(' ') }, { met: false, words: '', runId: null, utcMs });
       met.delete(key);
     }
@@ -256,26 +275,19 @@ export class AlarmWatch {
     const labIds = new Set(
       (await allRigs(services.database.db)).filter(({ id }) => services.stations.get(id) !== null).map(({ labId }) => labId),
     );
+    const hops = this.outage.end();
     for (const labId of labIds) {
       const place = { labId, rigId: null, code: 'database-away' as const, subject: '' };
       await this.report(place, { met: true, words, runId: null, sinceUtcMs, utcMs });
       await this.report(place, { met: false, words, runId: null, utcMs });
+      const alarm = (await standingAlarms(services.database.db, labId)).find(({ code }) => code === place.code);
+      const own = hops.filter((hop) => hop.labId === labId);
+      if (alarm === undefined || own.length === 0) continue;
+      const { id: alarmId, snapshot } = alarm;
+      await writeHops(
+        services.database.db,
+        own.map((hop) => ({ ...hop, alarmId, occurrence: snapshot.occurrence })),
+      );
     }
   }
 }
-
-/** Kinds that a look can tell to be over; others end by what somebody does. */
-const watched: readonly AlarmCode[] = [
-  ...(['unexpected-motion', 'limit', 'interlock', 'supply', 'controller-reset', 'proof-failed', 'home-edge', 'excursion', 'held'] as const),
-  ...([
-    'not-taken-up',
-    'link-lost',
-    'deflection-silent',
-    'channel-level',
-    'channel-slope',
-    'channel-silent',
-    'late-finish',
-    'disk-low',
-  ] as const),
-];
-const isWatched = (code: string): code is AlarmCode => (watched as readonly string[]).includes(code);

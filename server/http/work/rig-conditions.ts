@@ -21,6 +21,8 @@ export interface RigNow {
   /** Why an unfinished run could not be taken up; null where there is none. */
   quarantined: { runId: string; why: string } | null;
   link: Pick<LinkHealth, 'condition' | 'detail'>;
+  /** The controller has answered since the line was opened. */
+  linkWasReady: boolean;
   /** Opened or lost while the rig was armed or ran, and not yet made good. */
   open: { interlock: boolean; supply: boolean };
   /** When the deflection that the run is to be evaluated by last came; null: it never did, or nothing arrives by itself. */
@@ -28,6 +30,7 @@ export interface RigNow {
 }
 
 const silentMs = 60_000;
+const firstAnswerS = 60;
 const atRest: RunState[] = ['holding', 'held'];
 const atWork: RunState[] = ['starting', 'running', ...atRest];
 
@@ -46,8 +49,11 @@ export function conditionsOf(now: RigNow): Condition[] {
   if (open.interlock) add('interlock', 'The interlock was opened while the rig was armed. Close it and arm the rig again on site.');
   if (open.supply) add('supply', 'The motor supply was lost while the rig was armed; the position is lost with it.');
   if (quarantined !== null) found.push({ code: 'not-taken-up', subject: '', words: quarantined.why, runId: quarantined.runId });
-  if (link.condition === 'lost' || link.condition === 'refused')
-    add('link-lost', link.detail === '' ? 'The controller does not answer.' : link.detail);
+  if (link.condition === 'lost' || link.condition === 'refused') {
+    const words = link.detail === '' ? 'The controller does not answer.' : link.detail;
+    // A line that is being opened for the first time, as at the start of the server, may take a while.
+    found.push({ code: 'link-lost', subject: '', words, runId, ...(now.linkWasReady ? {} : { onDelayS: firstAnswerS }) });
+  }
   const silent = silentSince(now);
   if (silent !== null)
     found.push({
@@ -67,3 +73,16 @@ function silentSince({ run, deflectionUtcMs, utcMs }: RigNow): number | null {
   const flowed = deflectionUtcMs >= run.startedUtcMs - 10 * silentMs;
   return flowed && utcMs - deflectionUtcMs > silentMs ? deflectionUtcMs : null;
 }
+
+const slow: readonly AlarmCode[] = ['excursion', 'channel-level', 'channel-slope', 'channel-silent', 'late-finish'];
+
+/** Kinds that a look can tell to be over; others end by what somebody does. */
+const watched: readonly AlarmCode[] = [
+  ...(['unexpected-motion', 'limit', 'interlock', 'supply', 'controller-reset', 'proof-failed', 'home-edge', 'held'] as const),
+  ...(['not-taken-up', 'link-lost', 'deflection-silent', 'disk-low'] as const),
+  ...slow,
+];
+
+/** Kinds for which the database is looked into, which is done less often. */
+export const isSlow = (code: string): boolean => (slow as readonly string[]).includes(code);
+export const isWatched = (code: string): code is AlarmCode => (watched as readonly string[]).includes(code);

@@ -208,6 +208,36 @@ test('an outside watcher hears each minute that the server lives; one that does 
   await put(null).expect(200);
 }, 60_000);
 
+test('a run that is held because the database is away rings all the same, and the messages are written down when it is back', async () => {
+  const runId = await lab.run(quickProtocol({ steps: [{ kind: 'home' }, { kind: 'swing', to: 'near' }, { kind: 'dwell', for_s: 7200 }] }));
+  await lab.advance(45_000);
+  mails.length = 0;
+  const { pool } = lab.services.database;
+  const working = { connect: pool.connect.bind(pool), query: pool.query.bind(pool) };
+  const away = () => Promise.reject(Object.assign(new Error('connect ECONNREFUSED 127.0.0.1'), { code: 'ECONNREFUSED' }));
+  await lab.world.withoutDatabase(async () => {
+    Object.assign(pool, { connect: away, query: away });
+    await minutes(2);
+    expect(to()).toEqual(['ilse: Run held, database away: North bench']);
+    expect(mails[0]?.text).toContain('Hold and stop work without it.');
+    await minutes(1);
+    expect(to().at(-1)).toBe('tam: Run held, database away: North bench');
+    Object.assign(pool, working);
+    await lab.advance(10_000);
+  });
+  await soon();
+  const alarm = (await alarmOf('database-away')) as AlarmView;
+  expect(alarm.words).toMatch(/did not answer for 18\d s/);
+  const { body } = await lab.as('viewer', 'GET', path(`/alarms/${alarm.id}`)).expect(200);
+  expect((body.hops as AlarmHopView[]).map(({ name, means, outcome }) => `${name} ${means} ${outcome}`)).toEqual(
+    expect.arrayContaining(['Ilse Marrowby mail sent', 'Tam Ferrowdale mail sent']),
+  );
+  expect(await alarmOf('held')).toMatchObject({ state: 'active-unacknowledged', rigName: 'North bench' });
+  await lab.intervene(runId, 'stop').expect(202);
+  await soon();
+  expect(await alarmOf('held')).toMatchObject({ state: 'returned-unacknowledged' });
+}, 60_000);
+
 test('a trial says what became of each way, and given-up work is shown to owners, who may have it tried again', async () => {
   mailWorks = false;
   const trial = await lab.as('operator', 'POST', path('/on-call/trial')).expect(200);
