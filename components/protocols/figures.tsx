@@ -44,6 +44,9 @@ export function Figures({ plan, timeZone, startAt }: { plan: Plan; timeZone: str
           <Label>
             length, {plan.timeline.dwells} {plan.timeline.dwells === 1 ? 'dwell' : 'dwells'}
           </Label>
+          {plan.mostS > plan.timeline.durationS + 1 && !plan.timeline.truncated ? (
+            <Label testID="most-time">{formatDuration(plan.mostS)} if conditions keep it waiting</Label>
+          ) : null}
         </View>
         <View>
           <Num size={17} aside={signal.unit} testID="signal">

@@ -22,6 +22,8 @@ export interface StepSpan {
 
 export interface Plan {
   timeline: Timeline;
+  /** Length where every condition takes as long as it may, s; that of the timeline where none can. */
+  mostS: number;
   strip: StripStep[];
   predicted: { x: number[]; y: number[] } | null;
   equilibrium: { x: number[]; y: number[] } | null;
@@ -83,8 +85,8 @@ function spansOf(items: readonly TimelineItem[]): Map<string, StepSpan> {
   return spans;
 }
 
-function timelineOf({ document, rig, timeZone, startUtcMs }: PlanInput): Timeline {
-  return planTimeline({ protocol: document, rig, timeZone }, { utcMs: startUtcMs, angleDeg: rig.motion?.homeDeg ?? 0 });
+function timelineOf({ document, rig, timeZone, startUtcMs }: PlanInput, conditions: 'expected' | 'most' = 'expected'): Timeline {
+  return planTimeline({ protocol: document, rig, timeZone, conditions }, { utcMs: startUtcMs, angleDeg: rig.motion?.homeDeg ?? 0 });
 }
 
 /** Everything the editor shows of a draft. Never throws: what cannot be told of a draft is left out. */
@@ -95,6 +97,7 @@ export function makePlan(input: PlanInput): Plan {
   const start = { utcMs: startUtcMs, angleDeg: rig.motion?.homeDeg ?? 0, timeZone };
   return {
     timeline,
+    mostS: timelineOf(input, 'most').durationS,
     strip: stepsOfPlan(timeline.items),
     predicted: curve === null ? null : { x: curve.utcMs, y: curve.rad },
     equilibrium: curve === null ? null : { x: curve.utcMs, y: curve.equilibriumRad },

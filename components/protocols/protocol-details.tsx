@@ -4,6 +4,7 @@ import { Field, Label, Select } from '@/components/ui';
 import { zoneName } from '@/shared/lib/format-time';
 import type { InterruptionPolicy } from '@/shared/protocol/document';
 import { useEditor } from './editor-context';
+import { GoodWhenFields } from './good-when-fields';
 import type { PlanningRig } from './use-planning-rig';
 
 interface ProtocolDetailsProps {
@@ -31,6 +32,12 @@ export function ProtocolDetails({ planning, startAt, onStartAt }: ProtocolDetail
       atEnd:
         station === stays ? (drivers === undefined ? undefined : { drivers }) : { station, ...(drivers === undefined ? {} : { drivers }) },
     });
+  const setDrivers = (next: 'keep' | 'release') => {
+    const station = atEnd === undefined ? {} : { station: atEnd };
+    changeDocument({
+      atEnd: next === 'release' ? { ...station, drivers: next } : atEnd === undefined ? undefined : { ...station, drivers: next },
+    });
+  };
   return (
     <View className="gap-5" testID="protocol-details">
       <NameField />
@@ -65,6 +72,18 @@ export function ProtocolDetails({ planning, startAt, onStartAt }: ProtocolDetail
         disabled={!mayWrite}
         testID="at-end"
       />
+      <Select
+        label="The drivers then"
+        value={drivers ?? 'keep'}
+        options={[
+          { value: 'keep', label: 'keep their torque' },
+          { value: 'release', label: 'let go: the position is lost' },
+        ]}
+        onChange={setDrivers}
+        disabled={!mayWrite}
+        testID="at-end-drivers"
+      />
+      <GoodWhenFields />
       <View className="gap-5 border-t border-line pt-5">
         {planning.rigs.length === 0 ? (
           <Label>No rig in this lab yet: nothing can be predicted.</Label>

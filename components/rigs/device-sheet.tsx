@@ -44,13 +44,15 @@ export function DeviceSheet({ rig, onClose }: { rig: RigView; onClose: () => voi
           { value: 'deflection', label: 'Deflection' },
           { value: 'environment', label: 'The room' },
         ]}
-        onChange={(role) =>
-          setChannel(
-            role === 'deflection'
-              ? { ...channel, role, name: 'deflection', unit: 'urad' }
-              : { ...channel, role, name: 'box temperature', unit: 'degC' },
-          )
-        }
+        onChange={(role) => {
+          const deflection = role === 'deflection';
+          setChannel({
+            ...channel,
+            role,
+            ...(deflection ? { name: 'deflection', unit: 'urad' } : { name: 'box temperature', unit: 'degC' }),
+          });
+          setRate(deflection ? '10' : '1');
+        }}
       />
       <Field
         label="Channel"

@@ -131,6 +131,8 @@ export function mergeRows(before: readonly StepRowView[], news: readonly StepRow
 
 function withSamples(state: LiveState, data: LiveMessages['samples']): LiveState {
   const same = state.channel?.id === data.channelId;
+  // A rig may have two: the first that came is followed, or the one that the protocol registers.
+  if (state.channel !== null && !same && data.channel !== state.view?.protocol.evaluation?.channel) return state;
   const channel = { id: data.channelId, name: data.channel, unit: data.unit };
   const last = same ? (state.utcMs.at(-1) ?? -Infinity) : -Infinity;
   const fresh = data.utcMs.flatMap((at, index) => (at > last ? [index] : []));

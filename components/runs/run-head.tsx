@@ -54,7 +54,13 @@ function TimeLeft({ view, timeZone, serverNowMs, lost }: RunHeadProps) {
     deadlineMs !== null ? (deadlineMs - serverNowMs) / 1000 : sinceMs === null ? null : Math.max(0, (serverNowMs - sinceMs) / 1000);
   const kind = view.current?.kind === 'dwell' || view.current?.kind === 'swing' ? view.current.kind : 'step';
   const what =
-    deadlineMs !== null ? `left in this ${kind}` : !counting && sinceMs !== null ? 'since it came to rest' : 'since this step began';
+    deadlineMs !== null
+      ? view.waiting === null
+        ? `left in this ${kind}`
+        : 'until it gives up'
+      : !counting && sinceMs !== null
+        ? 'since it came to rest'
+        : 'since this step began';
   const clock = (utcMs: number) => formatClock(utcMs, { timeZone });
   return (
     <View className="flex-row flex-wrap items-center gap-x-4">
@@ -66,7 +72,7 @@ function TimeLeft({ view, timeZone, serverNowMs, lost }: RunHeadProps) {
         <Label>
           {deadlineMs === null ? null : (
             <>
-              ends <Num size={13}>{clock(deadlineMs)}</Num>
+              {view.waiting === null ? 'ends' : 'at'} <Num size={13}>{clock(deadlineMs)}</Num>
             </>
           )}
           {deadlineMs === null || view.predictedEndAt === null ? '' : ' · '}

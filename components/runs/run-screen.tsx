@@ -1,4 +1,5 @@
 import { useLocalSearchParams, type Href } from 'expo-router';
+import { useEffect, useRef } from 'react';
 import { View } from 'react-native';
 import { isProblem, useLab, wordsOf } from '@/components/api';
 import { Chip, Label, Loading, Panel, ProblemNotice, Screen, useWide } from '@/components/ui';
@@ -24,6 +25,7 @@ import { useNow } from './use-now';
 import { ReachedPanel, WaitingPanel } from './waiting-panel';
 import { useRunStrip } from './use-run-strip';
 
+const askAgainMs = 3000;
 const back = { href: '/runs' as Href, label: 'Runs' };
 
 /** A run: watched and held or stopped while it goes on, summed up once it is over. */
@@ -71,6 +73,7 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
   const lost = age.grade === 'lost';
   const { local, tap } = useIntervention({ labId, runId: view.id });
   const strip = useRunStrip(view.id, state, timeZone);
+  useAskAgain(view.state === 'held' || view.waiting?.kind === 'prompt', live.refresh);
   const plan = <PlanPanel view={view} rows={state.rows} beat={state.beat} lost={lost} large={wide} />;
   const log = <RecentSteps runId={view.id} protocol={view.protocol} rows={state.rows} timeZone={timeZone} count={wide ? 7 : 4} />;
   return (
@@ -102,6 +105,19 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
       <Facts view={view} />
     </Screen>
   );
+}
+
+/** What somebody does at the rig (arming it, closing the door) is no event of the run: whoever waits for it asks now and then. */
+function useAskAgain(waits: boolean, ask: () => void): void {
+  const latest = useRef(ask);
+  useEffect(() => {
+    latest.current = ask;
+  });
+  useEffect(() => {
+    if (!waits) return undefined;
+    const timer = setInterval(() => latest.current(), askAgainMs);
+    return () => clearInterval(timer);
+  }, [waits]);
 }
 
 /** A wrong count stands above all else, with what is known of it. */

@@ -72,7 +72,7 @@ export function stepTitle(row: TitledRow, protocol: TargetSource | null): string
     case 'ring-down':
       return `Ring-down${side}`;
     default:
-      return capital(row.kind) + (row.kind === 'wait' ? '' : side);
+      return capital(row.kind) + (['wait', 'proof', 'prompt'].includes(row.kind) ? '' : side);
   }
 }
 

@@ -96,7 +96,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   };
   const watch = new AlarmWatch({ services, paceMs: overrides.paceMs, freeDisk: () => freeDisk(config.stateDir) });
   const crew = buildCrew(parts, services);
-  const taking = new RigTaking(services, { leases, arms, locks, stations });
+  const taking = new RigTaking(services, { leases, arms, locks, stations, recent });
   access.onEnded((ended) => {
     live.endAccess(ended);
     lines.endAccess(ended);
@@ -143,7 +143,7 @@ function buildHubs({ clock, config }: BuildParts, services: () => Services): Pic
 function arrival(recent: RecentSamples, live: LiveHub): Services['arrived'] {
   return (rigId, { channelId, name, unit, role, rateHz }, { utcMs, value }) => {
     recent.add(rigId, { name, unit, role, rateHz }, { utcMs, value });
-    live.sampled(rigId, { channelId, channel: name, unit, utcMs: [...utcMs], value: [...value] });
+    if (role === 'deflection') live.sampled(rigId, { channelId, channel: name, unit, utcMs: [...utcMs], value: [...value] });
   };
 }
 

@@ -1,5 +1,7 @@
 import type { Services } from '../http/services';
 import type { StationRig } from '../interfaces/rig-stations';
+import { recallSamples } from '../ingest/recall-samples';
+import type { RecentSamples } from '../ingest/recent-samples';
 import { findRig } from '../store/rigs';
 import { unfinishedRuns } from '../store/runs-read';
 import type { RigSide } from './build-rigs';
@@ -12,7 +14,7 @@ export class RigTaking {
 
   constructor(
     private readonly services: Services,
-    private readonly side: Pick<RigSide, 'leases' | 'arms' | 'locks' | 'stations'>,
+    private readonly side: Pick<RigSide, 'leases' | 'arms' | 'locks' | 'stations'> & { recent: RecentSamples },
   ) {}
 
   /** Those that another process drives are waited for, and keep none of the others waiting. */
@@ -42,6 +44,7 @@ export class RigTaking {
       if (!isOurs(run.rigId)) continue;
       services.activeRuns.add(run);
       services.stations.loadMasses(run.rigId, run.start.rig);
+      await recallSamples({ ...services, recent: side.recent }, { labId: run.labId, rigId: run.rigId, nowUtcMs: services.clock.utcMs() });
     }
     await services.access.refresh(services.watchedLabs());
     const { quarantined } = await services.supervisor.recover(isOurs);

@@ -1,6 +1,7 @@
 import type { RunStart } from '@/shared/archive/run-records';
 import { advanceCursor, type PlannedItem } from '@/shared/protocol/cursor';
 import { stateAfterIfPossible } from '@/shared/protocol/step-effect';
+import { waitOf } from '@/shared/protocol/wait';
 import type { RunContext } from './run-context';
 
 export interface PredictionInput {
@@ -32,7 +33,13 @@ function advanceIfPossible(...args: Parameters<typeof advanceCursor>): ReturnTyp
   }
 }
 
-function afterPresentStep(start: RunStart, { step, moment, swingStartUtcMs }: RunContext, nowUtcMs: number) {
+function afterPresentStep(start: RunStart, { step, moment, swingStartUtcMs, waiting }: RunContext, nowUtcMs: number) {
+  // What ends by a condition may be met as soon as its samples are there.
+  if (step?.awaits === true) {
+    const windowMs = 1000 * (waitOf(step.item.step)?.windowS ?? 0);
+    const utcMs = Math.max(nowUtcMs, step.broken ? nowUtcMs + windowMs : (waiting?.firstLookUtcMs ?? nowUtcMs));
+    return { utcMs, angleDeg: moment.angleDeg, swingStartUtcMs: null };
+  }
   if (step?.broken === true && step.row.kind === 'wait')
     return stateAfterIfPossible(step.item.step, start, { utcMs: nowUtcMs, angleDeg: moment.angleDeg, swingStartUtcMs: null });
   if (step === null) return { utcMs: Math.max(moment.utcMs, nowUtcMs), angleDeg: moment.angleDeg, swingStartUtcMs: null };

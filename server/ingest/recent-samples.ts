@@ -10,7 +10,7 @@ export interface ChannelFacts {
 }
 
 /** As long as a settle waits if nothing else is said (4 h), and at most so many samples of a channel. */
-const KEPT_MS = 4 * 3_600_000;
+export const KEPT_MS = 4 * 3_600_000;
 const MOST_KEPT = 400_000;
 
 /** The last hours of every channel that is being filled, in memory: conditions of runs are looked up here. */

@@ -1,6 +1,6 @@
 import * as fc from 'fast-check';
 import { verifyChain } from '@/shared/archive/chain';
-import type { InterruptionPolicy } from '@/shared/protocol/document';
+import type { InterruptionPolicy, Step } from '@/shared/protocol/document';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import type { Rehearsal } from '@/server/engine/rehearsal/rehearse';
 import { runThrough, shortProtocol, startUtcMs } from './rehearsing';
@@ -89,6 +89,25 @@ test('a gap of the sensor leaves no sample for 120 s, a burst shakes them by up 
   expect(greatest).toBeGreaterThan(150e-6);
   expect(greatest).toBeLessThanOrEqual(200e-6);
 });
+
+test.each(['sensor-gap', 'burst'] as const)(
+  '%s: the dwell it falls into is not good, with the reason in the log, and the others are',
+  async (kind) => {
+    const reversal = (to: string): Step[] => [
+      { kind: 'swing', to },
+      { kind: 'dwell', beat_periods: 1 },
+    ];
+    const steps: Step[] = [{ kind: 'home' }, ...['near', 'far', 'near', 'far'].flatMap(reversal)];
+    const { steps: rows, events, outcome } = await runThrough({ ...shortProtocol, steps }, { faults: [{ kind, atS: 580 }] });
+    expect(outcome).toBe('finished');
+    expect(rows.filter((row) => row.kind === 'dwell').map(({ good }) => good)).toEqual([true, false, true, true]);
+    expect(events.filter((event) => event.kind === 'dwell-not-good').map(({ data }) => String(data['why']))).toEqual([
+      expect.stringMatching(
+        kind === 'burst' ? /^deflection off its fit by up to (1|2)\d\d µrad for 3\d s/ : /^deflection silent for 12\d s/,
+      ),
+    ]);
+  },
+);
 
 test('the log says for how long nobody drove the run', async () => {
   const { events } = await runThrough({ ...shortProtocol, onInterruption: 'resume' }, { faults: [{ kind: 'link-drop', atS: 20 }] });

@@ -29,10 +29,17 @@ describe('each checker finds a fault that is planted', () => {
     wholeLog: ({ world: { store } }) => void store.rows.delete(1),
     chainHolds: ({ world: { store } }) => Object.assign(store.events[2] as object, { kind: 'changed' }),
     nothingLost: ({ world: { store } }) => void store.events.splice(2, 1),
-    restsAfterHalt: ({ world: { witness } }) => void witness.ordered.push({ tag: 'late', atMs: 1e9 }),
+    restsAfterHalt: ({ world: { witness } }) => {
+      witness.halts.push({ kind: 'stop', atMs: 1e8 });
+      witness.ordered.push({ tag: 'late', atMs: 1e9 });
+    },
     restsAfterHazard: ({ world: { witness } }) => {
       witness.hazards.push({ kind: 'interlock', atMs: 1e8 });
       witness.began.push({ tag: 'late', atMs: 1e9 });
+    },
+    goodPassesCounted: ({ world: { store } }) => {
+      const dwell = [...store.rows.values()].find(({ kind, outcome }) => kind === 'dwell' && outcome === 'done');
+      Object.assign(dwell as object, { good: !(dwell?.good === true) });
     },
     comesToAnEnd: (night) => Object.assign(night, { stoodDeg: [1, 2] }),
   };

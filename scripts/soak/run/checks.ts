@@ -68,7 +68,22 @@ const comesToAnEnd: Check = ({ healed, world, stoodDeg }) => {
   return stoodDeg[0] === stoodDeg[1] ? null : `the table moved from ${stoodDeg[0]} to ${stoodDeg[1]} deg after the end`;
 };
 
+/** A run that finished made as many passes as it took for two good ones, three at most, and the log says of each dwell that is not good why. */
+const goodPassesCounted: Check = ({ world: { store }, healed }) => {
+  const dwells = [...store.rows.values()].filter(({ kind, outcome }) => kind === 'dwell' && outcome === 'done');
+  const told = new Set(store.events.filter(({ kind }) => kind === 'dwell-not-good').map(({ data }) => data['seq']));
+  const silent = dwells.find(({ good, seq }) => good === told.has(seq));
+  if (silent !== undefined) return `the dwell ${silent.seq} is ${String(silent.good)}, and the log says otherwise`;
+  if (healed !== 'finished') return null;
+  const passes = [1, 2, 3].map((pass) => dwells.filter(({ path }) => path.includes(`.repeat[${pass}].`)));
+  const made = passes.filter(({ length }) => length > 0).length;
+  const good = passes.slice(0, made).map((rows) => rows.length === 2 && rows.every((row) => row.good === true));
+  const wanted = good[0] === true && good[1] === true ? 2 : 3;
+  return made === wanted ? null : `${made} passes were made, of which good: ${good.join(', ')}`;
+};
+
 const checks: Readonly<Record<string, Check>> = {
+  goodPassesCounted,
   atMostOnce,
   wholeLog,
   chainHolds,

@@ -141,6 +141,16 @@ const deeds: Readonly<Record<string, Deed>> = {
     machineClock.stepMs += ms;
     return `${ms} ms`;
   },
+  'sensor-gap': ({ room }, { between }) => {
+    const ms = between(1_000, 90_000);
+    room.fallSilent(ms);
+    return `${ms} ms`;
+  },
+  burst: ({ room }, { between }) => {
+    const ms = between(1_000, 60_000);
+    room.warmUp(ms);
+    return `${ms} ms`;
+  },
   hold: (world) => {
     world.halt('hold');
     return '';
@@ -167,12 +177,20 @@ function protocolOf(policy: InterruptionPolicy, { between }: Dice): ProtocolDocu
     formatVersion: 1,
     name: 'Seeded',
     onInterruption: policy,
+    goodWhen: { channels: [{ channel: 'box temperature', below: 30 }] },
     steps: [
       { kind: 'home' },
       { kind: 'swing', to: 'near' },
       dwell(),
       { kind: 'mark', label: 'on the way' },
-      { kind: 'repeat', times: 2, steps: [{ kind: 'swing', to: 'far' }, dwell(), { kind: 'swing', to: 'near' }, dwell()] },
+      { kind: 'wait', until: { channel: 'box temperature', below: 30, for_s: between(1, 10) }, atMost_s: 40, otherwise: 'continue' },
+      {
+        kind: 'repeat',
+        times: 2,
+        counting: 'good',
+        atMost: 3,
+        steps: [{ kind: 'swing', to: 'far' }, dwell(), { kind: 'swing', to: 'near' }, dwell()],
+      },
     ],
   };
 }

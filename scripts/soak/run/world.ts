@@ -13,6 +13,7 @@ import { type RunStore, type RunWrite, StaleRunError, type StoredRun } from '@/s
 import type { TurntableLink } from '@/server/interfaces/turntable-link';
 import { createLink } from '@/server/links/link-driver';
 import { createSimulatedController, type SimulatedController } from '@/server/links/simulated-controller';
+import { Room } from './room';
 
 /** The engine, link and codec of a server with a turntable, a database and a disk around them, which can all fail. */
 
@@ -90,6 +91,7 @@ export class World {
   readonly machineClock: SteppingClock;
   readonly store: SimulatedStore;
   readonly controller: SimulatedController;
+  readonly room: Room;
   readonly witness: Witness = { began: [], ordered: [], halts: [], resumes: [], hazards: [], told: new Map(), errors: [] };
   private readonly journals = new MemoryJournals();
   private arm: Arm | null;
@@ -107,6 +109,7 @@ export class World {
     this.clock = new VirtualClock(startUtcMs, settle);
     this.machineClock = new SteppingClock(this.clock);
     this.store = new SimulatedStore(start);
+    this.room = new Room(this.machineClock);
     this.arm = start.arm;
     this.controller = createSimulatedController({
       ...{ clock: this.clock, rig: motionOf(start.rig), seed },
@@ -218,6 +221,7 @@ export class World {
       linkOf: () => link,
       armOf: () => this.arm,
       guidedBy: () => null,
+      samplesOf: () => this.room.reader,
       whyDisarmed: () => 'it was ended',
       lockedBy: () => null,
       perform: (effect) => {
@@ -243,14 +247,13 @@ export class World {
   }
 
   private readonly seen = new Set<string>();
-  private boots = 0;
 
   private noteSent(line: string): void {
     const item = decodeLine(line.trimEnd());
     if (item.kind !== 'event') return;
-    // An event that is read again is the same event.
-    if (item.what.word === 'boot' && !this.seen.has(`${this.boots} ${item.atUs}`)) this.boots += 1;
-    const key = `${this.boots} ${item.number} ${item.atUs}`;
+    // An event that is read again, as by the next process, is the same event; numbers and times begin anew with each reset.
+    const resets = this.witness.hazards.filter(({ kind }) => kind === 'reset').length;
+    const key = `${resets} ${item.number} ${item.atUs}`;
     if (this.seen.has(key)) return;
     this.seen.add(key);
     if (item.what.word === 'began') this.witness.began.push({ tag: item.what.tag, atMs: this.nowMs });
