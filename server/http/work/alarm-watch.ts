@@ -37,6 +37,8 @@ interface Known {
   met: Set<string> | null;
   /** What the last look into the database found; null before there was one. */
   slow: Condition[] | null;
+  /** Why they mean nothing now, as last told; undefined before it was. */
+  suppressedWhy?: string | null;
 }
 
 /**
@@ -233,13 +235,16 @@ export class AlarmWatch {
     const utcMs = this.parts.services.clock.utcMs();
     const { met } = known;
     if (met === null) return;
+    // Whoever began or ended to work at the rig changes what the same conditions mean.
+    const toldAnew = known.suppressedWhy !== suppressedWhy;
     for (const condition of found) {
       const key = keyOf(condition);
-      if (met.has(key)) continue;
+      if (met.has(key) && !toldAnew) continue;
       const { code, subject, sinceUtcMs, ...rest } = condition;
       await this.report({ ...at, code, subject }, { ...rest, met: true, suppressedWhy, sinceUtcMs, utcMs });
       met.add(key);
     }
+    known.suppressedWhy = suppressedWhy;
     for (const key of [...met]) {
       const [code = '', ...subject] = key.split(' ');
       if (

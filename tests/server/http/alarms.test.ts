@@ -1,49 +1,22 @@
 import { demoIds, demoPeople } from '@/db/demo/seed';
 import { sendSigns } from '@/server/http/work/signs-of-life';
-import type { Mail } from '@/server/interfaces/mail';
-import type { PushMessage } from '@/server/interfaces/push';
 import { enqueueJob } from '@/server/store/jobs';
 import { verifyChain } from '@/shared/archive/chain';
 import { auditLinks } from '@/server/store/audit';
 import type { AlarmHopView, AlarmView } from '@/shared/contracts/alarms';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol, sha256 } from '@/tests/support/lab-server';
+import { outsideWorld } from './outside-world';
 
 /** A night on the demo rig in Zurich, from 21:00: something goes wrong and people are told. */
 
 const database = databaseOfThisFile();
 let lab: LabServer;
-const mails: Mail[] = [];
-const pushes: { to: string; message: PushMessage }[] = [];
-const watcher = { status: 200, asked: [] as string[] };
-let mailWorks = true;
+const outside = outsideWorld();
+const { mails, pushes, watcher } = outside;
 
 beforeAll(async () => {
-  lab = await LabServer.start(database(), {
-    overrides: {
-      paceMs: 5_000,
-      mail: {
-        send: async (mail) => {
-          if (!mailWorks) throw new Error('550 mailbox unavailable');
-          mails.push(mail);
-        },
-      },
-      push: {
-        publicKey: async () => 'BPublic',
-        send: async ({ endpoint }, message) => {
-          if (endpoint.endsWith('gone')) return 'gone';
-          pushes.push({ to: endpoint, message });
-          return 'sent';
-        },
-      },
-      outgoing: {
-        send: async ({ url }) => {
-          watcher.asked.push(url);
-          return { status: watcher.status };
-        },
-      },
-    },
-  });
+  lab = await LabServer.start(database(), { overrides: { paceMs: 5_000, ...outside.overrides } });
 }, 60_000);
 afterAll(() => lab.stop());
 beforeEach(() => {
@@ -238,8 +211,29 @@ test('a run that is held because the database is away rings all the same, and th
   expect(await alarmOf('held')).toMatchObject({ state: 'returned-unacknowledged' });
 }, 60_000);
 
+test('while somebody works at the rig its alarms mean nothing; afterwards what still holds is raised', async () => {
+  const controller = lab.world.controller(demoIds.rig);
+  controller.unplug();
+  await minutes(1);
+  expect(await alarmOf('link-lost')).toMatchObject({ state: 'active-unacknowledged', rings: 'never' });
+  const locks = path(`/rigs/${demoIds.rig}/locks`);
+  const { body: lock } = await lab.as('operator', 'POST', locks).send({}).expect(201);
+  await soon();
+  expect(await alarmOf('link-lost')).toMatchObject({ state: 'suppressed', suppressedWhy: expect.stringContaining('Ilse Marrowby') });
+  await lab
+    .as('operator', 'POST', `${locks}/${lock.id as string}/lift`)
+    .send({ handsOut: true })
+    .expect(204);
+  await soon();
+  expect(await alarmOf('link-lost')).toMatchObject({ state: 'active-unacknowledged', occurrence: 2 });
+  controller.plug();
+  await soon();
+  await soon();
+  expect(await alarmOf('link-lost')).toMatchObject({ state: 'returned-unacknowledged' });
+}, 60_000);
+
 test('a trial says what became of each way, and given-up work is shown to owners, who may have it tried again', async () => {
-  mailWorks = false;
+  outside.mailWorks = false;
   const trial = await lab.as('operator', 'POST', path('/on-call/trial')).expect(200);
   expect(trial.body.items).toEqual([
     { means: 'push', outcome: 'sent', detail: 'Telephone' },
