@@ -91,15 +91,18 @@ describe('what arrives', () => {
     expect(mergeRows(rows.slice(2), rows.slice(0, 3)).map(({ seq }) => seq)).toEqual(rows.map(({ seq }) => seq));
   });
 
-  test('samples sent again after a reconnect are not drawn twice, and another channel starts anew', () => {
-    const samples = (channelId: string, utcMs: number[]): LiveMessage => ({
+  test('samples sent again after a reconnect are not drawn twice; of two channels the registered one is followed', () => {
+    const samples = (channel: string, utcMs: number[]): LiveMessage => ({
       type: 'samples',
       receivedAtMs: 0,
-      data: { channelId, channel: 'deflection', unit: 'rad', utcMs, value: utcMs.map(() => 0.5) },
+      data: { channelId: `id of ${channel}`, channel, unit: 'rad', utcMs, value: utcMs.map(() => 0.5) },
     });
-    const state = receive(noLive, samples('a', [1, 2, 3]), samples('a', [2, 3, 4]));
+    const state = receive(noLive, snapshot({ lastSeq: 4 }), samples('spot', [1, 2, 3]), samples('spot', [2, 3, 4]));
     expect(state.utcMs).toEqual([1, 2, 3, 4]);
-    expect(receive(state, samples('b', [9])).utcMs).toEqual([9]);
+    expect(receive(state, samples('second camera', [9])).utcMs).toEqual([1, 2, 3, 4]);
+    const registered = receive(state, samples('deflection', [9]));
+    expect(registered.utcMs).toEqual([9]);
+    expect(receive(registered, samples('spot', [10])).utcMs).toEqual([9]);
   });
 
   test('a long night is thinned at its old end only', () => {
