@@ -54,7 +54,12 @@ const share = (ppm: number) => `${formatSignificant(ppm, 3, { signed: true })}${
 /** Rows of the live health; `nowMs` by the server's clock. */
 export function healthRows({ health, controller }: Pick<LineMessage, 'health' | 'controller'>, nowMs: number): HealthRow[] {
   return [
-    { label: 'State', ...conditions[health.condition], aside: health.detail === '' ? undefined : health.detail },
+    {
+      label: 'State',
+      ...conditions[health.condition],
+      ...(health.keptOutBy === null ? {} : { advice: 'It obeys another server: let that one have the rig, or take the controller over.' }),
+      aside: health.detail === '' ? undefined : health.detail,
+    },
     answerRow(health, nowMs),
     roundTripRow(health),
     ...lossRows(health),
