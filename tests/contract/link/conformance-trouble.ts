@@ -63,7 +63,7 @@ export function troubleConformance(maker: BenchMaker, scene: Scene): void {
     await scene.watch.link.close();
     scene.watch = new LinkWatch(scene.bench, 0);
     scene.watch.link.open();
-    expect((await scene.watch.get('refused-controller')).why).toMatch(/Another server drives this controller \(its epoch is \d+\)/);
+    expect((await scene.watch.get('refused-controller')).why).toMatch(/Another server has driven this controller \(under number \d+\)/);
     expect(scene.watch.link.health().condition).toBe('refused');
   });
 
