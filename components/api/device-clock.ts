@@ -9,11 +9,15 @@ export interface ClockOffset {
   uMs: number;
 }
 
-/** An exchange with a shorter round trip bounds the offset better; an old bound is worth less as clocks drift (100 ppm assumed, no source). */
+/** Apart from a step, the offset changes by no more than this between two exchanges, ms (100 ppm over ten minutes: assumed, no source). */
+const driftMs = 60;
+
+/** An exchange with a shorter round trip bounds the offset better; one that contradicts the bound tells that a clock was set: the newer holds. */
 export function betterOffset(before: ClockOffset | null, exchange: { sentMs: number; receivedMs: number; serverMs: number }): ClockOffset {
   const uMs = (exchange.receivedMs - exchange.sentMs) / 2;
   const offsetMs = exchange.serverMs - (exchange.sentMs + uMs);
-  return before !== null && before.uMs <= uMs ? before : { offsetMs, uMs };
+  const wasSet = before !== null && Math.abs(offsetMs - before.offsetMs) > uMs + before.uMs + driftMs;
+  return before !== null && !wasSet && before.uMs <= uMs ? before : { offsetMs, uMs };
 }
 
 let offset: ClockOffset | null = null;

@@ -1,6 +1,6 @@
 import { useRouter, type Href } from 'expo-router';
 import { View } from 'react-native';
-import { serverNowIso, useLab, useLabCall, useLabOnce, useLabQuery, useSession, wordsOf } from '@/components/api';
+import { serverNowIso, useLab, useLabCall, useLabOnce, useLabQuery, useSession, Unanswered, wordsOf } from '@/components/api';
 import { Body, Label, Num, Panel, PressAndKeep, ProblemNotice, Section } from '@/components/ui';
 import { getOnCall } from '@/shared/contracts/calls';
 import { reviewStart } from '@/shared/contracts/reviews';
@@ -122,7 +122,9 @@ function StartAct({ rig, choice, mayStart, stale }: StartActProps) {
   const ready = allowed && review !== null;
   return (
     <View className="gap-3">
-      {start.isError ? <ProblemNotice title="The run was not started" {...wordsOf(start.error)} /> : null}
+      {start.isError ? (
+        <ProblemNotice title={start.error instanceof Unanswered ? 'No answer' : 'The run was not started'} {...wordsOf(start.error)} />
+      ) : null}
       {allowed ? null : (
         <Body tone="dim">
           {stale

@@ -1,6 +1,6 @@
 import { useState } from 'react';
 import { View } from 'react-native';
-import { callOnce, serverNowIso, useConnection, useLab, useMay, wordsOf } from '@/components/api';
+import { callOnce, serverNowIso, useConnection, useLab, useMay, Unanswered, wordsOf } from '@/components/api';
 import { Body, Button, Panel, ProblemNotice } from '@/components/ui';
 import { withdrawHold } from '@/shared/contracts/going-on';
 import type { RunView } from '@/shared/contracts/runs';
@@ -32,14 +32,14 @@ function Pending({ view }: { view: RunView }) {
   const may = useMay('run.resume');
   const { online } = useConnection();
   const [busy, setBusy] = useState(false);
-  const [problem, setProblem] = useState<string | null>(null);
+  const [problem, setProblem] = useState<unknown>(null);
   const withdraw = async () => {
     setBusy(true);
     setProblem(null);
     try {
       await callOnce(withdrawHold, { params: { labId, runId: view.id }, body: { tappedAt: serverNowIso() } });
     } catch (error) {
-      setProblem(wordsOf(error).detail);
+      setProblem(error);
     } finally {
       setBusy(false);
     }
@@ -58,7 +58,9 @@ function Pending({ view }: { view: RunView }) {
           testID="withdraw-hold"
         />
       ) : null}
-      {problem === null ? null : <ProblemNotice title="Not withdrawn" detail={problem} />}
+      {problem === null ? null : (
+        <ProblemNotice title={problem instanceof Unanswered ? 'No answer' : 'Not withdrawn'} detail={wordsOf(problem).detail} />
+      )}
     </Panel>
   );
 }

@@ -13,11 +13,17 @@ interface HeldNoticeProps {
 }
 
 /** Why the run is held and what lets it go on; the way to resume, or the reason why not. */
-export function HeldNotice({ view, timeZone, serverNowMs }: HeldNoticeProps) {
+export function HeldNotice(props: HeldNoticeProps) {
+  const { view } = props;
+  // A part of its own: a review left open by one hold must not open by itself at the next.
+  if (view.state === 'held') return <HeldPanel {...props} />;
+  return view.reason === '' ? null : <ReasonPanel reason={view.reason} />;
+}
+
+function HeldPanel({ view, timeZone, serverNowMs }: HeldNoticeProps) {
   const [reviewing, setReviewing] = useState(false);
   const may = useMay('run.resume');
   const { online } = useConnection();
-  if (view.state !== 'held') return view.reason === '' ? null : <ReasonPanel reason={view.reason} />;
   const why = !may.ok
     ? may.why
     : !online

@@ -1,16 +1,7 @@
 import { callOnce, serverNowIso, useLab, useLabCall } from '@/components/api';
 import { resumeRun } from '@/shared/contracts/going-on';
 import { reviewResume } from '@/shared/contracts/reviews';
-import type { RunView } from '@/shared/contracts/runs';
-import { remainingFacts, ReviewedAct } from './reviewed-act';
-import { stepTitle } from './run-words';
-
-export interface RunSheetProps {
-  view: RunView;
-  timeZone: string;
-  serverNowMs: number;
-  onClose: () => void;
-}
+import { remainingFacts, ReviewedAct, type RunSheetProps } from './reviewed-act';
 
 /** What a resume will do, with the plan from here on. */
 export function ResumeSheet({ view, timeZone, serverNowMs, onClose }: RunSheetProps) {
@@ -28,8 +19,7 @@ export function ResumeSheet({ view, timeZone, serverNowMs, onClose }: RunSheetPr
       facts={(review) => [
         ['Rig', view.rigName],
         ['Protocol', `${view.protocolName}, revision ${view.protocolRevision}`],
-        ['Goes on with', view.current === null ? 'the next step' : stepTitle({ ...view.current, outcome: null }, view.protocol)],
-        ...remainingFacts(review, { timeZone, serverNowMs }),
+        ...remainingFacts(review, { view, timeZone, serverNowMs }),
       ]}
       confirm={{ label: 'Resume', icon: 'start', testID: 'resume-confirm' }}
       failedTitle="Not resumed"

@@ -1,19 +1,29 @@
 import { useState } from 'react';
 import { View } from 'react-native';
-import { wordsOf } from '@/components/api';
+import { Unanswered, wordsOf } from '@/components/api';
 import { useReview } from '@/components/rigs/use-review';
 import { Body, Label, PressAndKeep, ProblemNotice, Row, Sheet, type IconName } from '@/components/ui';
+import type { RunView } from '@/shared/contracts/runs';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { formatPercent } from '@/shared/lib/format-number';
 import { formatClockWithZone } from '@/shared/lib/format-time';
+import { stepTitle } from './run-words';
 
 /** What every review of a run that is to go on says of the plan. */
 export interface Remaining {
   token: string;
   dwellsLeft: number;
   finishAt: string;
+  next: { path: string; kind: string; label: string; station: string } | null;
   firstMove: string;
   plannedU: { soFar: number | null; atEnd: number | null };
+}
+
+export interface RunSheetProps {
+  view: RunView;
+  timeZone: string;
+  serverNowMs: number;
+  onClose: () => void;
 }
 
 export type Fact = readonly [name: string, value: string];
@@ -24,13 +34,15 @@ const leftWords = (dwells: number) =>
 const percent = (share: number | null) => (share === null ? '–' : formatPercent(share));
 
 /** The plan from here on: first move, dwells and pairs left, the finish in the lab's time, u of G as planned. */
-export function remainingFacts(review: Remaining | null, { timeZone, serverNowMs }: { timeZone: string; serverNowMs: number }): Fact[] {
-  if (review === null) return ['First move', 'Left', 'Ends about', 'u of G by the plan'].map((name) => [name, '…'] as const);
+export function remainingFacts(review: Remaining | null, { view, timeZone, serverNowMs }: Omit<RunSheetProps, 'onClose'>): Fact[] {
+  if (review === null)
+    return ['Goes on with', 'First move', 'Left', 'Ends about', 'u of G by the plan'].map((name) => [name, '…'] as const);
   const finishMs = Date.parse(review.finishAt);
   const inS = Math.max(0, (finishMs - serverNowMs) / 1000);
   const { soFar, atEnd } = review.plannedU;
   const known = soFar !== null || atEnd !== null;
   return [
+    ['Goes on with', review.next === null ? 'its end' : stepTitle({ ...review.next, outcome: null }, view.protocol)],
     ['First move', capital(review.firstMove)],
     ['Left', leftWords(review.dwellsLeft)],
     ['Ends about', `${formatClockWithZone(finishMs, { timeZone, weekday: true })}, in ${formatDuration(inS)}`],
@@ -58,7 +70,7 @@ interface ReviewedActProps<T extends Remaining> {
 export function ReviewedAct<T extends Remaining>(props: ReviewedActProps<T>) {
   const { title, intro, of, ask, send, facts, confirm, failedTitle, onClose, testID } = props;
   const [busy, setBusy] = useState(false);
-  const [problem, setProblem] = useState<string | null>(null);
+  const [problem, setProblem] = useState<unknown>(null);
   const { review, problem: unreviewed, renew } = useReview(of, ask, true);
   const act = async () => {
     if (review === null) return;
@@ -69,13 +81,13 @@ export function ReviewedAct<T extends Remaining>(props: ReviewedActProps<T>) {
       onClose();
     } catch (error) {
       renew();
-      setProblem(wordsOf(error).detail);
+      setProblem(error);
     } finally {
       setBusy(false);
     }
   };
   const shown = facts(review);
-  const said = problem ?? (review === null && unreviewed !== null ? wordsOf(unreviewed).detail : null);
+  const said = problem ?? (review === null ? unreviewed : null);
   return (
     <Sheet
       open
@@ -103,7 +115,9 @@ export function ReviewedAct<T extends Remaining>(props: ReviewedActProps<T>) {
           </Row>
         ))}
       </View>
-      {said === null ? null : <ProblemNotice title={failedTitle} detail={said} />}
+      {said === null ? null : (
+        <ProblemNotice title={said instanceof Unanswered ? 'No answer' : failedTitle} detail={wordsOf(said).detail} />
+      )}
       <Label>This counts for 5 s after you let go. It is sent once and never repeated by itself.</Label>
     </Sheet>
   );

@@ -75,6 +75,8 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
   const strip = useRunStrip(view.id, state, timeZone);
   useAskAgain(view.state === 'held' || view.waiting?.kind === 'prompt', live.refresh);
   const plan = <PlanPanel view={view} rows={state.rows} beat={state.beat} lost={lost} large={wide} />;
+  // One that waits is to be seen, and to be withdrawn, without scrolling.
+  const afterDwell = <AfterDwell view={view} timeZone={timeZone} serverNowMs={serverNowMs} onTap={() => tap('hold-after-dwell')} />;
   const log = <RecentSteps runId={view.id} protocol={view.protocol} rows={state.rows} timeZone={timeZone} count={wide ? 7 : 4} />;
   return (
     <Screen
@@ -97,9 +99,10 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
       <SlipNotice view={view} timeZone={timeZone} />
       <HeldNotice view={view} timeZone={timeZone} serverNowMs={serverNowMs} />
       <WaitingPanel view={view} timeZone={timeZone} serverNowMs={serverNowMs} />
+      {view.holdAfterDwell ? afterDwell : null}
       <LiveStrip strip={strip} timeZone={timeZone} serverNowMs={serverNowMs} title={`${view.rigName}, ${view.protocolName}`} lost={lost} />
       <ReachedPanel view={view} />
-      <AfterDwell view={view} timeZone={timeZone} serverNowMs={serverNowMs} onTap={() => tap('hold-after-dwell')} />
+      {view.holdAfterDwell ? null : afterDwell}
       {wide ? null : plan}
       {wide ? null : log}
       <Facts view={view} />

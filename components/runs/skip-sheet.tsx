@@ -4,8 +4,7 @@ import { Button } from '@/components/ui';
 import { skipStep } from '@/shared/contracts/going-on';
 import { reviewSkip } from '@/shared/contracts/reviews';
 import { formatDuration } from '@/shared/lib/format-duration';
-import { remainingFacts, ReviewedAct } from './reviewed-act';
-import type { RunSheetProps } from './resume-sheet';
+import { remainingFacts, ReviewedAct, type RunSheetProps } from './reviewed-act';
 import { stepTitle } from './run-words';
 
 /** What a skip leaves out and breaks, with the plan after it. */
@@ -27,7 +26,7 @@ function SkipSheet({ view, timeZone, serverNowMs, onClose, seq }: RunSheetProps 
           review === null ? '…' : `${stepTitle({ ...review, outcome: null }, view.protocol)}: ${formatDuration(review.leftS)} of it`,
         ],
         ['Counts no more', review === null ? '…' : brokenWords(review)],
-        ...remainingFacts(review, { timeZone, serverNowMs }),
+        ...remainingFacts(review, { view, timeZone, serverNowMs }),
       ]}
       confirm={{ label: 'Skip', icon: 'forward', testID: 'skip-confirm' }}
       failedTitle="Not skipped"
@@ -38,8 +37,8 @@ function SkipSheet({ view, timeZone, serverNowMs, onClose, seq }: RunSheetProps 
 }
 
 function brokenWords({ kind, notGoodPath }: { kind: string; notGoodPath: string | null }): string {
-  if (kind !== 'dwell') return 'nothing: no dwell is cut';
-  return notGoodPath === null ? 'this dwell, and the other of its pair when it comes' : `this dwell, and ${notGoodPath} of its pair`;
+  if (kind !== 'dwell') return 'Nothing: no dwell is cut';
+  return notGoodPath === null ? 'This dwell, and the other of its pair when it comes' : `This dwell, and ${notGoodPath} of its pair`;
 }
 
 /** Offered while a step stands that may be left out, to those who may. */

@@ -1,7 +1,7 @@
 import type { RunStart } from '@/shared/archive/run-records';
 import { cadenceOf } from '@/shared/planning/strategies';
 import { predictU } from '@/shared/planning/plan-uncertainty';
-import type { LeafStep } from '@/shared/protocol/cursor';
+import type { LeafStep, PlannedItem } from '@/shared/protocol/cursor';
 import { planTimeline } from '@/shared/protocol/timeline';
 import { mateOf } from './pairs';
 import { predictEndUtcMs } from './predicted-end';
@@ -12,6 +12,8 @@ export interface RemainingPlan {
   /** Dwells still to come, one that is begun anew included. */
   dwellsLeft: number;
   finishUtcMs: number;
+  /** The step that begins first; null: the run is at its end. */
+  next: { path: string; kind: string; label: string; station: string } | null;
   /** The first motion, with where it comes from: a step of the protocol; null: nothing moves any more. */
   firstMotion: LeafStep | null;
   /** Relative standard uncertainty of G by the plan (not measured): after the dwells done, and after those still to come. */
@@ -26,6 +28,7 @@ export function resumePlan(start: RunStart, { state, context }: RunSnapshot, now
   return planFrom(start, context, {
     nowUtcMs,
     dwells: anew?.row.kind === 'dwell' ? 1 : 0,
+    next: anew === null ? null : nextOf(anew.item, anew.row.station),
     firstMotion: anew?.motion == null ? null : anew.item.step,
   });
 }
@@ -52,7 +55,7 @@ export function skipPlan(start: RunStart, { state, context }: RunSnapshot, nowUt
   const leftMs = step.broken ? (step.plannedMs ?? 0) : (plannedEndUtcMs ?? nowUtcMs) - nowUtcMs;
   const after = { ...context, step: null, moment: { ...context.moment, utcMs: nowUtcMs } };
   return {
-    ...planFrom(start, after, { nowUtcMs, dwells: 0, firstMotion: null }),
+    ...planFrom(start, after, { nowUtcMs, dwells: 0, next: null, firstMotion: null }),
     ...{ seq, path, kind, label, station },
     leftS: Math.max(0, leftMs / 1000),
     notGoodPath: mateOf(context, step.row)?.path ?? null,
@@ -63,19 +66,30 @@ interface Begun {
   nowUtcMs: number;
   /** Dwells that the present step adds to those to come. */
   dwells: number;
+  next: RemainingPlan['next'];
   firstMotion: LeafStep | null;
 }
 
+const nextOf = ({ path, step }: PlannedItem, station: string) => ({ path, kind: step.kind, label: step.label ?? '', station });
+
 function planFrom(start: RunStart, context: RunContext, begun: Begun): RemainingPlan {
-  let { dwells, firstMotion } = begun;
+  let { dwells, next, firstMotion } = begun;
   const finishUtcMs = predictEndUtcMs(start, context, {
     nowUtcMs: begun.nowUtcMs,
-    eachStep: ({ step }) => {
+    eachStep: (item) => {
+      const { step } = item;
+      next ??= nextOf(item, '');
       if (step.kind === 'dwell') dwells += 1;
       if (step.kind === 'swing' || step.kind === 'home') firstMotion ??= step;
     },
   });
-  return { dwellsLeft: dwells, finishUtcMs, firstMotion, relativeU: expectedU(start, context.dwellsDone, context.dwellsDone + dwells) };
+  return {
+    dwellsLeft: dwells,
+    finishUtcMs,
+    next,
+    firstMotion,
+    relativeU: expectedU(start, context.dwellsDone, context.dwellsDone + dwells),
+  };
 }
 
 /** The whole plan's cadence with so many dwells; null before there is a reversal, or where the rig does not tell. */

@@ -9,6 +9,8 @@ const remaining = {
   /** Dwells still to come, one that is begun anew included. */
   dwellsLeft: z.number().int(),
   finishAt: instantSchema,
+  /** The step that begins first; null: the run is at its end. */
+  next: z.strictObject({ path: z.string(), kind: z.string(), label: z.string(), station: z.string() }).nullable(),
   /** In words; `nothing moves` where nothing does. */
   firstMove: z.string(),
   /** Relative standard uncertainty of G as the plan has it, not measured: after the dwells done, and at the finish; null: the rig does not tell. */

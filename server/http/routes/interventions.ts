@@ -100,8 +100,9 @@ const reviewRoutes = [
   }),
 ];
 
-const remainingOf = ({ dwellsLeft, finishUtcMs, firstMotion, relativeU }: RemainingPlan, rig: RigDocument) => ({
+const remainingOf = ({ dwellsLeft, finishUtcMs, next, firstMotion, relativeU }: RemainingPlan, rig: RigDocument) => ({
   dwellsLeft,
+  next,
   finishAt: isoOf(finishUtcMs),
   firstMove: firstMotion === null ? 'nothing moves' : moveWords(firstMotion, rig),
   plannedU: relativeU,

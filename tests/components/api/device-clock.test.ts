@@ -6,6 +6,14 @@ test('the offset is the server’s time less the middle of the exchange, known t
 
 test('a quicker exchange is believed, a slower one is not', () => {
   const first = betterOffset(null, { sentMs: 0, receivedMs: 100, serverMs: 5050 });
-  expect(betterOffset(first, { sentMs: 1000, receivedMs: 1400, serverMs: 9999 })).toBe(first);
+  expect(betterOffset(first, { sentMs: 1000, receivedMs: 1400, serverMs: 6300 })).toBe(first);
   expect(betterOffset(first, { sentMs: 1000, receivedMs: 1020, serverMs: 6020 })).toEqual({ offsetMs: 5010, uMs: 10 });
+});
+
+test('a clock that was set is believed at the next exchange, however slow that is', () => {
+  const before = betterOffset(null, { sentMs: 0, receivedMs: 10, serverMs: 5 });
+  const after = betterOffset(before, { sentMs: 100_000, receivedMs: 100_400, serverMs: 28_200 });
+  expect(after).toEqual({ offsetMs: -72_000, uMs: 200 });
+  // A slow answer alone contradicts nothing.
+  expect(betterOffset(after, { sentMs: 200_000, receivedMs: 203_000, serverMs: 129_000 })).toEqual(after);
 });

@@ -1,9 +1,10 @@
 import { connect, createServer, type AddressInfo, type Server, type Socket } from 'node:net';
 
-/** `open`: all goes through. `deaf`: what is sent arrives, no answer comes back. `cut`: nothing gets through. */
-type Condition = 'open' | 'deaf' | 'cut';
+/** `open`: all goes through. `slow`: answers take 3 s longer. `deaf`: what is sent arrives, no answer comes back. `cut`: nothing gets through. */
+type Condition = 'open' | 'slow' | 'deaf' | 'cut';
 
 const deafMs = 150;
+const slowMs = 3000;
 
 /** The network between a page and the server: it can be cut and mended, and it can swallow answers. */
 export class Network {
@@ -50,7 +51,10 @@ export class Network {
       // As on a bad network: the line goes down with the answer still under way.
       if (this.condition === 'deaf') setTimeout(() => near.destroy(), deafMs);
     });
-    far.on('data', (bytes) => (this.condition === 'open' ? near.write(bytes) : undefined));
+    far.on('data', (bytes) => {
+      if (this.condition === 'open') near.write(bytes);
+      else if (this.condition === 'slow') setTimeout(() => (near.destroyed ? undefined : near.write(bytes)), slowMs);
+    });
   }
 
   private hangUp(): void {
