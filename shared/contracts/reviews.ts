@@ -4,7 +4,8 @@ import { defineRoute } from './route';
 
 /** What sets masses in motion is reviewed first: the review gives a token that counts once, for this very act, within 30 s. */
 
-const reviewed = { token: z.string(), expiresAt: instantSchema };
+/** `serverAt` teaches the page the server's clock just before the tap that has to be fresh by it. */
+const reviewed = { token: z.string(), expiresAt: instantSchema, serverAt: instantSchema };
 const remaining = {
   /** Dwells still to come, one that is begun anew included. */
   dwellsLeft: z.number().int(),

@@ -71,7 +71,7 @@ const reviewRoutes = [
       throw notFound('protocol revision');
     if ((await findMassSet(db, { labId: membership.labId, rigId: rig.id }, body.massSetId)) === null) throw notFound('mass set');
     const { token, expiresUtcMs } = services.reviews.issue({ userId: me.userId, rigId: rig.id, subject: startSubject(body) });
-    return { token, expiresAt: isoOf(expiresUtcMs) };
+    return { token, expiresAt: isoOf(expiresUtcMs), serverAt: isoOf(services.clock.utcMs()) };
   }),
 
   mount(reviewContracts.reviewResume, async ({ params, me, membership, services }) => {
@@ -81,7 +81,7 @@ const reviewRoutes = [
     if (found === null || plan === null) throw new ProblemError('not-possible-now', 'The run is not held, so there is nothing to resume.');
     const { rigId, start } = found.run;
     const { token, expiresUtcMs } = services.reviews.issue({ userId: me.userId, rigId, subject: resumeSubject(params.runId) });
-    return { token, expiresAt: isoOf(expiresUtcMs), ...remainingOf(plan, start.rig) };
+    return { token, expiresAt: isoOf(expiresUtcMs), serverAt: isoOf(services.clock.utcMs()), ...remainingOf(plan, start.rig) };
   }),
 
   mount(reviewContracts.reviewSkip, async ({ params, body, me, membership, services }) => {
@@ -96,7 +96,13 @@ const reviewRoutes = [
     const { seq, path, kind, label, station, leftS, notGoodPath } = plan;
     const { token, expiresUtcMs } = services.reviews.issue({ userId: me.userId, rigId, subject: skipSubject(params.runId, seq) });
     const leavesOut = { seq, path, kind, label, station, leftS, notGoodPath };
-    return { token, expiresAt: isoOf(expiresUtcMs), ...remainingOf(plan, start.rig), ...leavesOut };
+    return {
+      token,
+      expiresAt: isoOf(expiresUtcMs),
+      serverAt: isoOf(services.clock.utcMs()),
+      ...remainingOf(plan, start.rig),
+      ...leavesOut,
+    };
   }),
 ];
 

@@ -100,7 +100,11 @@ async function open(options: { armed: boolean; locks?: LockView[] }): Promise<Fa
   }));
   lab.on('POST /labs/lab-1/rigs/rig-1/start-review', () => ({
     status: 201,
-    body: { token: `token-${lab.requests('POST /labs/lab-1/rigs/rig-1/start-review').length}`, expiresAt: '2031-03-13T21:00:30Z' },
+    body: {
+      token: `token-${lab.requests('POST /labs/lab-1/rigs/rig-1/start-review').length}`,
+      expiresAt: '2031-03-13T21:00:30Z',
+      serverAt: new Date().toISOString(),
+    },
   }));
   params['rigId'] = 'rig-1';
   went.length = 0;
