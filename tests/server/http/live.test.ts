@@ -1,5 +1,6 @@
 import { demoIds, demoPeople } from '@/db/demo/seed';
 import type { ChainedEvent } from '@/shared/archive/run-records';
+import type { Role } from '@/shared/contracts/roles';
 import { liveMessageSchemas, type RunView } from '@/shared/contracts/runs';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol } from '@/tests/support/lab-server';
@@ -192,4 +193,32 @@ test('six at a time and person; the seventh is told why', async () => {
   await open[0]?.untilEnded();
   for (let turn = 0; turn < 20; turn += 1) await new Promise((resolve) => void setImmediate(resolve));
   expect((await follow(runId)).response.statusCode).toBe(200);
+});
+
+const runs = `/labs/${demoIds.lab}/runs`;
+
+test('a page has what it needs when the database is away: who asks, what runs and how it stands, but not its log', async () => {
+  const runId = await lab.run(quickProtocol());
+  await lab.advance(3_600_000, () => lab.services.supervisor.driverOf(runId)?.facts().current?.kind === 'dwell');
+  const { pool } = lab.services.database;
+  const working = { connect: pool.connect.bind(pool), query: pool.query.bind(pool) };
+  const away = () => Promise.reject(Object.assign(new Error('connect ECONNREFUSED 127.0.0.1'), { code: 'ECONNREFUSED' }));
+  const ask = (who: Role, path: string) => lab.as(who, 'GET', path);
+  Object.assign(pool, { connect: away, query: away });
+  const [session, active, run, steps, foreign, stranger] = await Promise.all([
+    ask('viewer', '/session'),
+    ask('viewer', `${runs}?active=true&limit=20`),
+    ask('viewer', `${runs}/${runId}`),
+    ask('viewer', `${runs}/${runId}/steps`),
+    ask('viewer', `/labs/${demoIds.rig}/runs?active=true`),
+    ask('viewer', '/session').set('Cookie', 'ef=made-up'),
+  ]).finally(() => Object.assign(pool, working));
+  expect(session.body.memberships).toEqual([expect.objectContaining({ labId: demoIds.lab, role: 'viewer' })]);
+  expect(active.body.items).toMatchObject([{ id: runId, state: 'running' }]);
+  expect(run.body).toMatchObject({ id: runId, current: { kind: 'dwell' } });
+  expect(steps.body.code).toBe('database-away');
+  // Nobody is let in who was not known before, and nobody sees another lab.
+  expect([foreign.status, stranger.status]).toEqual([503, 401]);
+  await lab.intervene(runId, 'stop').expect(202);
+  await lab.until(runId, 'stopped');
 });

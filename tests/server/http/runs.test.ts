@@ -1,7 +1,6 @@
 import { unzipSync } from 'fflate';
 import type { Response } from 'supertest';
 import { demoIds } from '@/db/demo/seed';
-import type { Role } from '@/shared/contracts/roles';
 import type { ChainedEvent } from '@/shared/archive/run-records';
 import { readArchive } from '@/shared/archive/read-archive';
 import { verifyChain } from '@/shared/archive/chain';
@@ -258,32 +257,6 @@ describe('hold and stop', () => {
       by: 'Pim Oldershaw',
       confirmedAt: expect.any(String),
     });
-  });
-
-  test('have their page when the database is away: who asks, what runs and how it stands, but not its log', async () => {
-    const runId = await lab.run(quickProtocol());
-    await lab.advance(3_600_000, () => lab.services.supervisor.driverOf(runId)?.facts().current?.kind === 'dwell');
-    const { pool } = lab.services.database;
-    const working = { connect: pool.connect.bind(pool), query: pool.query.bind(pool) };
-    const away = () => Promise.reject(Object.assign(new Error('connect ECONNREFUSED 127.0.0.1'), { code: 'ECONNREFUSED' }));
-    const ask = (who: Role, path: string) => lab.as(who, 'GET', path);
-    Object.assign(pool, { connect: away, query: away });
-    const [session, active, run, steps, foreign, stranger] = await Promise.all([
-      ask('viewer', '/session'),
-      ask('viewer', `${runs}?active=true&limit=20`),
-      ask('viewer', `${runs}/${runId}`),
-      ask('viewer', `${runs}/${runId}/steps`),
-      ask('viewer', `/labs/${demoIds.rig}/runs?active=true`),
-      ask('viewer', '/session').set('Cookie', 'ef=made-up'),
-    ]).finally(() => Object.assign(pool, working));
-    expect(session.body.memberships).toEqual([expect.objectContaining({ labId: demoIds.lab, role: 'viewer' })]);
-    expect(active.body.items).toMatchObject([{ id: runId, state: 'running' }]);
-    expect(run.body).toMatchObject({ id: runId, current: { kind: 'dwell' } });
-    expect(steps.body.code).toBe('database-away');
-    // Nobody is let in who was not known before, and nobody sees another lab.
-    expect([foreign.status, stranger.status]).toEqual([503, 401]);
-    await lab.intervene(runId, 'stop').expect(202);
-    await lab.until(runId, 'stopped');
   });
 
   test('of a session that ended are refused', async () => {

@@ -198,7 +198,7 @@ test('the door card says when to keep out, until when and whom to ring, to whoev
   await lab.until(runId, 'stopped');
   expect(await read()).toMatchObject({ state: 'free' });
   expect(Object.keys(await read()).sort()).toEqual(
-    ['labName', 'nextAt', 'ring', 'rigName', 'serverAt', 'state', 'timeZone', 'untilAt'].sort(),
+    ['labName', 'nextAt', 'onCall', 'ring', 'rigName', 'serverAt', 'state', 'timeZone', 'untilAt'].sort(),
   );
   await lab.as('keeper', 'DELETE', path).expect(204);
   await request(lab.built.app)
