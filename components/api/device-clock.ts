@@ -20,11 +20,25 @@ export function betterOffset(before: ClockOffset | null, exchange: { sentMs: num
   return before !== null && !wasSet && before.uMs <= uMs ? before : { offsetMs, uMs };
 }
 
+/** How late a message of a live stream may be that is taken for the server's time, ms (an estimate, no source). */
+const onTheWayMs = 250;
+
+/** A message can only be late: where the server's time is thought to be behind what it says, a clock was set. */
+export function offsetAfterMessage(before: ClockOffset | null, message: { receivedMs: number; serverMs: number }): ClockOffset {
+  const offsetMs = message.serverMs - message.receivedMs;
+  return before !== null && before.offsetMs + before.uMs + driftMs >= offsetMs ? before : { offsetMs, uMs: onTheWayMs };
+}
+
 let offset: ClockOffset | null = null;
 
 /** Learns from an answer that carried the server's time. */
 export function observeServerTime(exchange: { sentMs: number; receivedMs: number; serverMs: number }): void {
   offset = betterOffset(offset, exchange);
+}
+
+/** Learns from a message of a live stream that carried the server's time, ms UTC. */
+export function hearServerTime(serverMs: number): void {
+  offset = offsetAfterMessage(offset, { receivedMs: deviceNowMs(), serverMs });
 }
 
 /** The present time by the server's clock, ms UTC; the phone's own until the first exchange. */

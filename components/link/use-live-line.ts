@@ -1,5 +1,5 @@
 import { useEffect, useState } from 'react';
-import { addressOf, deviceNowMs, useLab } from '@/components/api';
+import { addressOf, deviceNowMs, hearServerTime, useLab } from '@/components/api';
 import { reportReached } from '@/components/api/connection';
 import { lineMessageSchema, liveLine, type LineMessage } from '@/shared/contracts/link';
 
@@ -42,7 +42,9 @@ export function useLiveLine(rigId: string): LiveLine {
       };
       stream.addEventListener('line', (event) => {
         const line = readLine((event as MessageEvent<string>).data);
-        if (line !== null) setState({ line, heardAtMs: deviceNowMs(), broken: false });
+        if (line === null) return;
+        hearServerTime(Date.parse(line.serverAt));
+        setState({ line, heardAtMs: deviceNowMs(), broken: false });
       });
     };
     open();

@@ -1,5 +1,5 @@
 import { useCallback, useEffect, useReducer, useRef } from 'react';
-import { addressOf, call, deviceNowMs, isProblem, useLab } from '@/components/api';
+import { addressOf, call, deviceNowMs, hearServerTime, isProblem, useLab } from '@/components/api';
 import { reportReached } from '@/components/api/connection';
 import { getRun, listSteps, liveMessageSchemas, liveRun, type LiveMessages } from '@/shared/contracts/runs';
 import { isOver } from './run-words';
@@ -47,6 +47,7 @@ function openStream(address: string, { onMessage, onOpen, onBroken }: Handlers):
     for (const type of types) {
       stream.addEventListener(type, (event) => {
         const message = readMessage(type, (event as MessageEvent<string>).data, deviceNowMs());
+        if (message?.type === 'beat') hearServerTime(Date.parse(message.data.serverAt));
         if (message !== null) onMessage(message);
       });
     }
