@@ -22,8 +22,10 @@ mkdirSync(output, { recursive: true });
 
 const cluster = await startCluster('test');
 const env = { ...process.env, EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres'), TZ: 'UTC' };
-const jest = (more, report) =>
-  pass(
+/** The row with the browser is the longest and the only one in real time: the others stand back for it. */
+const standingBack = (command, args, options) => pass('nice', ['-n', '10', command, ...args], options);
+const jest = (more, report, run = pass) =>
+  run(
     process.execPath,
     [
       join(root, 'node_modules', 'jest', 'bin', 'jest.js'),
@@ -41,9 +43,9 @@ for (const report of [inBrowser, other]) rmSync(report, { force: true });
 /** The browser's tests and those on PostgreSQL wait most of the time: all goes on beside each other, each in one row of its own. */
 async function all() {
   const [checked, ...tested] = await Promise.all([
-    pass(process.execPath, [join(root, 'scripts', 'check.mjs')], { cwd: root }),
+    standingBack(process.execPath, [join(root, 'scripts', 'check.mjs')], { cwd: root }),
     ensureWebBuild().then(() => jest(['--selectProjects', 'e2e', '-i'], inBrowser)),
-    jest(['--selectProjects', 'node', 'web', '-i'], other),
+    jest(['--selectProjects', 'node', 'web', '-i'], other, standingBack),
   ]);
   return { checked, tested: Math.max(...tested) };
 }
