@@ -36,15 +36,17 @@ export class AccessDirectory {
   private copy = emptyCopy();
   private watched: ReadonlySet<string> = new Set();
   private readonly listeners = new Set<(ended: EndedAccess) => void>();
+  /** For each look into the database that is under way, the sessions and accounts forgotten since it began: what it finds of them is old. */
+  private readonly looks = new Set<Set<string>>();
 
   constructor(private readonly parts: { source: AccessSource; sessions: SessionPort; clock: Clock; sha256: (text: string) => string }) {}
 
   /** The signed-in account of a cookie token, or null. */
   async signedIn(token: string): Promise<SignedIn | null> {
-    const living = await this.parts.sessions.validate(token);
+    const { found: living, forgotten } = await this.look(() => this.parts.sessions.validate(token));
     if (living === null) return null;
     const { user, ...session } = living;
-    if (this.watched.size > 0) {
+    if (this.watched.size > 0 && !forgotten.has(session.id) && !forgotten.has(user.id)) {
       this.copy.sessions.set(session.id, session);
       this.copy.users.set(user.id, user);
     }
@@ -53,8 +55,9 @@ export class AccessDirectory {
 
   /** Role of an account in a lab, or null for a stranger. */
   async membership(userId: string, labId: string): Promise<Membership | null> {
-    const membership = await this.parts.source.membership(userId, labId);
-    if (membership !== null && this.watched.has(labId)) this.copy.memberships.set(membershipKey(userId, labId), membership);
+    const { found: membership, forgotten } = await this.look(() => this.parts.source.membership(userId, labId));
+    if (membership !== null && this.watched.has(labId) && !forgotten.has(userId))
+      this.copy.memberships.set(membershipKey(userId, labId), membership);
     return membership;
   }
 
@@ -86,15 +89,20 @@ export class AccessDirectory {
       this.copy = emptyCopy();
       return;
     }
-    const found = await this.parts.source.ofLabs(labIds);
+    const { found, forgotten } = await this.look(() => this.parts.source.ofLabs(labIds));
+    const stands = ({ id, userId }: Pick<Session, 'id' | 'userId'>) => !forgotten.has(id) && !forgotten.has(userId);
     const nowMs = this.parts.clock.utcMs();
     const idledOut = [...this.copy.sessions.values()].filter(
       (session) => session.expiresAt.getTime() <= nowMs && nowMs - session.createdAt.getTime() <= absoluteLifeMs,
     );
     this.copy = {
-      sessions: new Map([...idledOut, ...found.sessions].map((session) => [session.id, session])),
+      sessions: new Map([...idledOut, ...found.sessions].filter(stands).map((session) => [session.id, session])),
       users: new Map(found.users.map((user) => [user.id, user])),
-      memberships: new Map(found.memberships.map(({ userId, ...membership }) => [membershipKey(userId, membership.labId), membership])),
+      memberships: new Map(
+        found.memberships
+          .filter(({ userId }) => !forgotten.has(userId))
+          .map(({ userId, ...membership }) => [membershipKey(userId, membership.labId), membership]),
+      ),
     };
   }
 
@@ -108,6 +116,7 @@ export class AccessDirectory {
   forgetSession(token: string): void {
     const sessionId = this.parts.sha256(token);
     this.copy.sessions.delete(sessionId);
+    for (const look of this.looks) look.add(sessionId);
     for (const listener of this.listeners) listener({ sessionId });
   }
 
@@ -115,6 +124,17 @@ export class AccessDirectory {
   forgetUser(userId: string): void {
     for (const [id, session] of this.copy.sessions) if (session.userId === userId) this.copy.sessions.delete(id);
     for (const key of this.copy.memberships.keys()) if (key.startsWith(`${userId} `)) this.copy.memberships.delete(key);
+    for (const look of this.looks) look.add(userId);
     for (const listener of this.listeners) listener({ userId });
+  }
+
+  private async look<T>(into: () => Promise<T>): Promise<{ found: T; forgotten: ReadonlySet<string> }> {
+    const forgotten = new Set<string>();
+    this.looks.add(forgotten);
+    try {
+      return { found: await into(), forgotten };
+    } finally {
+      this.looks.delete(forgotten);
+    }
   }
 }

@@ -137,7 +137,11 @@ describe('a revision', () => {
   });
 
   test('is refused as not yet built where the format allows more than this version runs', async () => {
-    const made = await make('Later', { formatVersion: 1, name: 'Later', steps: [{ kind: 'home' }, { kind: 'rotate', period_s: 60, turns: 2 }] });
+    const made = await make('Later', {
+      formatVersion: 1,
+      name: 'Later',
+      steps: [{ kind: 'home' }, { kind: 'rotate', period_s: 60, turns: 2 }],
+    });
     const answer = await issue(made.id, made.etag).expect(422);
     expect(answer.body).toMatchObject({ code: 'not-yet', errors: [{ path: '2.rotate', code: 'not-yet' }] });
   });
