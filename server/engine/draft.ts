@@ -40,12 +40,15 @@ export interface RowEnd {
 export class Draft {
   readonly context: RunContext;
   readonly out: Output;
+  /** The predicted finish, UTC ms, where whoever only asks what would be knows it already. */
+  readonly predictedEndUtcMs: number | null;
 
   constructor(
     readonly start: RunStart,
     readonly event: RunEvent,
-    from: { context: RunContext; out: Output },
+    from: { context: RunContext; out: Output; predictedEndUtcMs?: number | null },
   ) {
+    this.predictedEndUtcMs = from.predictedEndUtcMs ?? null;
     this.context = structuredClone(from.context);
     this.out = { steps: [...from.out.steps], events: [...from.out.events], effects: [...from.out.effects] };
   }

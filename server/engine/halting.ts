@@ -183,7 +183,7 @@ function armRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string
   if (arm === 'simulated') return null;
   if (arm === null || armVoid !== null)
     return `The rig is not armed${armVoid === null ? '' : `: ${armVoid}`}. A named person has to arm it on site first.`;
-  const endUtcMs = predictEndUtcMs(draft.start, draft.context, { nowUtcMs: draft.nowUtcMs });
+  const endUtcMs = draft.predictedEndUtcMs ?? predictEndUtcMs(draft.start, draft.context, { nowUtcMs: draft.nowUtcMs });
   if (arm.untilUtcMs > endUtcMs) return null;
   return `The arm of ${arm.name} ends at ${iso(arm.untilUtcMs)}, before the predicted finish at ${iso(endUtcMs)}. Arm the rig until after that.`;
 }

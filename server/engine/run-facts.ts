@@ -85,6 +85,8 @@ interface Now {
   arm: Arm | null;
   /** In a sentence, whose personal locks are on the rig. */
   lockedBy: string | null;
+  /** Predicted finish, UTC ms, where it is known: on a long protocol it takes as long to find as all the rest. */
+  predictedEndUtcMs?: number | null;
 }
 
 /** Whether a person could resume now, and if not, what stands in the way. */
@@ -101,14 +103,14 @@ export function mayResume(start: RunStart, snapshot: RunSnapshot, now: Now): { o
 export function maySkip(
   start: RunStart,
   snapshot: RunSnapshot,
-  { seq, ...now }: Now & { seq: number | null },
+  { seq, predictedEndUtcMs = null, ...now }: Now & { seq: number | null },
 ): { ok: boolean; why: string } {
   const { state, context } = snapshot;
   if (state !== 'standing' && state !== 'awaiting' && state !== 'held')
     return { ok: false, why: 'Only a dwell, a settle or a wait can be left out.' };
   if (now.lockedBy !== null) return { ok: false, why: now.lockedBy };
   const event = { type: 'skip' as const, at: { utcMs: now.utcMs, uS: 0 }, by: '', arm: now.arm, seq: seq ?? 0 };
-  const why = skipRefusal(new Draft(start, event, { context, out: nothingOut }));
+  const why = skipRefusal(new Draft(start, event, { context, out: nothingOut, predictedEndUtcMs }));
   return { ok: why === null, why: why ?? '' };
 }
 
@@ -155,7 +157,7 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, pre
             confirmedAtUtcMs: intervention.confirmedAtUtcMs,
           },
     mayResume: mayResume(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy }),
-    maySkip: { ...maySkip(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy, seq }), seq },
+    maySkip: { ...maySkip(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy, seq, predictedEndUtcMs }), seq },
     lastSeq,
   };
 }
