@@ -16,7 +16,7 @@ import { rehearsalJobKind, workRehearsal } from '../http/work/rehearsal-job';
 import { tellStarter } from '../http/work/tell-starter';
 import { AppendRates } from '../ingest/append-rate';
 import { RecentSamples } from '../ingest/recent-samples';
-import type { MailPort } from '../interfaces/mail';
+import { MailNotSetUp, type MailPort } from '../interfaces/mail';
 import type { StationRig } from '../interfaces/rig-stations';
 import { alarmJobs } from '../notify/alarm-jobs';
 import { mailJobs } from '../notify/mail-jobs';
@@ -49,7 +49,7 @@ export interface Inside extends Omit<RigSide, 'supervisor' | 'guided' | 'soak'> 
   closeTasks(): Promise<void>;
 }
 
-const noMail: MailPort = { send: () => Promise.reject(new Error('no mail server is configured: set EVENFALL_SMTP_URL')) };
+const noMail: MailPort = { send: () => Promise.reject(new MailNotSetUp()) };
 const newToken = () => randomBytes(32).toString('base64url');
 const usualPollMs = 1000;
 

@@ -7,7 +7,7 @@ import { callMembersOf } from '../store/calls';
 import type { Handle } from '../store/database';
 import { enqueueJob } from '../store/jobs';
 import { findRun, type RunRecord } from '../store/runs-read';
-import { oneLine, tellPerson, type TellParts } from './tell';
+import { oneLine, tellPerson, type TellParts, worthAnotherTry } from './tell';
 
 /** What whoever started a run hears of it: that it began and until when nobody need worry, that it is held, and how it ended. */
 
@@ -48,8 +48,8 @@ async function tellOfRun(parts: TellParts, notice: RunNotice): Promise<void> {
     tag: `run-${run.id}`,
     quiet: starter.doNotRing !== null && isWithinHours(starter.doNotRing, clock),
   });
-  const failed = told.find(({ means, outcome }) => means === 'mail' && outcome === 'failed');
-  if (failed !== undefined) throw new Error(`the mail was not taken: ${failed.detail}`);
+  const failed = worthAnotherTry(told);
+  if (failed !== null) throw new Error(`the ${failed.means} message was not taken: ${failed.detail}`);
 }
 
 export function paragraphsOf(

@@ -1,4 +1,4 @@
-import type { MailPort } from '../interfaces/mail';
+import { MailNotSetUp, type MailPort } from '../interfaces/mail';
 import type { PushMessage, PushPort } from '../interfaces/push';
 import type { Database } from '../store/database';
 import { notePushed, pushDevicesOf, removePushDevice, type PushDeviceRecord } from '../store/push-devices';
@@ -28,6 +28,10 @@ export interface Told {
   outcome: 'sent' | 'failed' | 'not-set-up';
   detail: string;
 }
+
+/** What failed, where it is worth another try: whoever was reached by one means is not rung again for the sake of the other. */
+export const worthAnotherTry = (told: readonly Told[]): Told | null =>
+  told.some(({ outcome }) => outcome === 'sent') ? null : (told.find(({ outcome }) => outcome === 'failed') ?? null);
 
 export const oneLine = (text: string) => text.replace(/\s+/g, ' ').trim();
 const wordsOf = (error: unknown) => oneLine(error instanceof Error ? error.message : String(error)).slice(0, 500);
@@ -74,6 +78,6 @@ async function mailTo({ mail, origin }: TellParts, to: string, { title, paragrap
     await mail.send({ to, subject: oneLine(title), text: `${[...paragraphs, `${origin()}${path}`].join('\n\n')}\n` });
     return { means: 'mail', outcome: 'sent', detail: '' };
   } catch (error) {
-    return { means: 'mail', outcome: 'failed', detail: wordsOf(error) };
+    return { means: 'mail', outcome: error instanceof MailNotSetUp ? 'not-set-up' : 'failed', detail: wordsOf(error) };
   }
 }
