@@ -1,6 +1,7 @@
 import { decodeLine } from '@/firmware-protocol/codec';
 import { CPU_HZ } from '@/server/links/board/avr-core';
 import { commissionedSession, controllerOn } from '@/server/links/board/board-controller';
+import { COMMISSION_TAGS } from '@/server/links/board/commission';
 import { type BoardHost, LocalBoardHost } from '@/server/links/board/board-host';
 import type { BoardLine, BoardSession } from '@/server/links/board/board-session';
 import type { Edge } from '@/server/links/board/emulated-board';
@@ -87,6 +88,8 @@ export class WatchedBoard {
     this.heard.add(item.number);
     const { what } = item;
     if (what.word !== 'began' && what.word !== 'ended') return;
+    // Made before anybody watched, and told again from the ring.
+    if (COMMISSION_TAGS.some((tag) => tag === what.tag)) return;
     if (what.word === 'began') {
       if (this.began.has(what.tag)) this.note(`the motion ${what.tag} began twice`);
       this.began.add(what.tag);

@@ -5,6 +5,9 @@ import { limitsOf } from '../rig-units';
 import { CPU_HZ } from './avr-core';
 import type { BoardSession } from './board-session';
 
+/** Of the motions that bring a board to its place: a driver that reads the ring from its oldest event hears of them. */
+export const COMMISSION_TAGS = [hex8(1), hex8(2)] as const;
+
 /** SPEC 13: a start takes at most 1 s. */
 const START_S = 1;
 /** The lease of 2 s is renewed well before it lapses. */
@@ -25,9 +28,9 @@ export function commission(session: BoardSession, rig: RigMotion, { homedAt }: {
   const lesson = keeper.put({ word: 'teach', ...limitsOf(rig) });
   if (lesson.body.word === 'no') throw new BeyondFirmware(teachRefusal(rig, lesson.body).message);
   if (homedAt === null) return;
-  keeper.turn({ word: 'home', tag: hex8(1) });
+  keeper.turn({ word: 'home', tag: COMMISSION_TAGS[0] });
   const { speed, acceleration } = limitsOf(rig);
-  if (homedAt !== 0) keeper.turn({ word: 'move', tag: hex8(2), position: homedAt, speed, acceleration, beginUs: null });
+  if (homedAt !== 0) keeper.turn({ word: 'move', tag: COMMISSION_TAGS[1], position: homedAt, speed, acceleration, beginUs: null });
 }
 
 /** The rig asks for more than the firmware can do; the message says what, and what the most is. */
