@@ -111,14 +111,20 @@ function lossRows({ discardedLines, discardedBytes, droppedByController, retries
     {
       label: 'Dropped there',
       value: droppedByController === null ? '–' : String(droppedByController),
-      aside: 'lines, by the controller',
+      aside: `${droppedByController === 1 ? 'line' : 'lines'}, by the controller`,
       state: droppedByController === null ? 'plain' : droppedByController === 0 ? 'good' : 'look',
       advice: garbled
         ? 'None of them moved anything. If the numbers grow: another rate at the other end, a bad earth, or a cable too long beside the motor leads.'
         : '',
     },
-    { label: 'Asked again', value: String(retries), aside: 'requests', state: 'plain', advice: '' },
-    { label: 'Opened again', value: String(reconnects), aside: 'times', state: reconnects === 0 ? 'plain' : 'look', advice: '' },
+    { label: 'Asked again', value: String(retries), aside: retries === 1 ? 'request' : 'requests', state: 'plain', advice: '' },
+    {
+      label: 'Opened again',
+      value: String(reconnects),
+      aside: reconnects === 1 ? 'time' : 'times',
+      state: reconnects === 0 ? 'plain' : 'look',
+      advice: '',
+    },
   ];
 }
 

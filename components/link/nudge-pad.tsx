@@ -1,11 +1,14 @@
+import { useState } from 'react';
 import { View } from 'react-native';
 import { readDecimal } from '@/components/ui/read-decimal';
 import { Body, Button, Check, Field, Label, Panel, ProblemNotice } from '@/components/ui';
 import type { GuidedView, LineMessage } from '@/shared/contracts/link';
 import { formatDegrees } from '@/shared/lib/format-angle';
+import { homingObstacle } from '@/shared/protocol/homing';
 import type { RigMotion } from '@/shared/rig/document';
 import { keepOutEntered } from '@/shared/rig/travel';
 import type { FirstMove } from './first-move-draft';
+import type { StepProps } from './step-props';
 import type { GuidedMove } from './use-guided';
 
 interface NudgePadProps {
@@ -106,9 +109,12 @@ export function NudgePad({ motion, line, guided, move }: NudgePadProps) {
   );
 }
 
-/** Finds the home edge, so that angles are known. */
-export function HomeButton({ line, guided }: Pick<NudgePadProps, 'line' | 'guided'>) {
+/** Finds the home edge, so that angles are known. Where the way to it may not be free, only somebody who looks at it begins. */
+export function HomeButton({ rig, line, guided }: Pick<StepProps, 'rig' | 'line' | 'guided'>) {
   const known = line.controller?.positionKnown === true;
+  const obstacle = homingObstacle(rig.document, line.controller?.angleDeg ?? null);
+  const [looksAt, setLooksAt] = useState<string | null>(null);
+  const looks = obstacle !== null && looksAt === obstacle;
   return (
     <View className="gap-2">
       <Label tone="text">
@@ -116,13 +122,24 @@ export function HomeButton({ line, guided }: Pick<NudgePadProps, 'line' | 'guide
           ? `The position is known: ${formatDegrees(line.controller?.angleDeg ?? null)} by the rig document.`
           : 'The position is not known. Nudge the table until it stands near the edge of the home flag, then home: it searches at home speed, towards the edge.'}
       </Label>
+      {obstacle === null ? null : (
+        <Panel edge="danger" className="gap-3" testID="homing-obstacle">
+          <Body>The rig does not home by itself: {obstacle}.</Body>
+          <Check
+            label="I look at the gap, with Stop under my thumb: home all the same."
+            value={looks}
+            onChange={(on) => setLooksAt(on ? obstacle : null)}
+            testID="home-all-the-same"
+          />
+        </Panel>
+      )}
       <Button
         icon="home"
         label={known ? 'Home again' : 'Home'}
         className="self-start"
-        disabled={guided.whyNot !== '' || guided.mine === null}
+        disabled={guided.whyNot !== '' || guided.mine === null || (obstacle !== null && !looks)}
         busy={guided.busy}
-        onPress={guided.home}
+        onPress={() => guided.home(looks)}
         testID="home"
       />
     </View>

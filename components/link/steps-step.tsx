@@ -73,7 +73,7 @@ function EdgeToEdge(props: StepProps) {
         The controller counts each pass of the home flag’s edge. Home, then nudge over the edge and on in one direction until it is passed
         again: a whole turn is 360°. Where the flag has two edges, enter the angle between them instead. The travel must be free all round.
       </Body>
-      <HomeButton line={line} guided={guided} />
+      <HomeButton rig={props.rig} line={line} guided={guided} />
       <NudgePad {...props} />
       <Label tone="text" testID="edge-passes">
         {edges.length === 0

@@ -20,7 +20,7 @@ export function TravelStep(props: StepProps) {
         Nudge clockwise to the last place where everything is still clear by hand and feeler (2 mm at the glass), and say that it is the
         least; then counter-clockwise to the greatest. Small nudges near the end.
       </Body>
-      <HomeButton line={line} guided={guided} />
+      <HomeButton rig={props.rig} line={line} guided={guided} />
       <NudgePad {...props} />
       <View className="flex-row flex-wrap gap-3">
         <End

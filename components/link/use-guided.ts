@@ -25,7 +25,7 @@ export interface GuidedMove {
   begin: () => void;
   end: () => void;
   nudge: (steps: number, intoKeepOut: boolean) => void;
-  home: () => void;
+  home: (intoKeepOut: boolean) => void;
   teach: (etag: string | undefined) => void;
 }
 
@@ -103,7 +103,7 @@ export function useGuided(rigId: string, { line, broken }: LiveLine): GuidedMove
       ending.mutate({ params, body: { guidedId } });
     },
     nudge: (steps, intoKeepOut) => give((body) => nudging.mutate({ params, body: { ...body, steps, intoKeepOut } })),
-    home: () => give((body) => homing.mutate({ params, body })),
+    home: (intoKeepOut) => give((body) => homing.mutate({ params, body: { ...body, intoKeepOut } })),
     teach: (etag) => give((body) => teaching.mutate({ params, ifMatch: etag, body })),
   };
 }

@@ -4,6 +4,7 @@ import { Field, Label, Tabs } from '@/components/ui';
 import type { SerialPortView } from '@/shared/contracts/link';
 import type { LinkSettings } from '@/shared/contracts/rigs';
 import { PortList } from './port-list';
+import { wrongFields } from './link-words';
 import { NetworkFields, type NetworkLink } from './network-fields';
 
 interface LinkFormProps {
@@ -21,28 +22,36 @@ const insideServer = {
     'A light stand-in for a controller inside the server, with the same line protocol and limits, and a pendulum that answers to it. For learning, rehearsing and tests.',
 };
 
+/** What was typed as a whole number; no number at all where it is none, so that nothing else is used in its place. */
+const numberOf = (text: string) => (/^\s*\d+\s*$/.test(text) ? Number(text) : NaN);
+
 /** A controller inside the server, a serial line by its path and speed, or a network serial server. What was typed for the line survives a look at the other choice. */
 export function LinkForm({ link, onChange, errors }: LinkFormProps) {
   const [path, setPath] = useState(link.kind === 'serial' ? link.path : '');
   const [baud, setBaud] = useState(String(link.kind === 'serial' ? link.baudRate : usualBaud));
   const [network, setNetwork] = useState<NetworkLink>(
-    link.kind === 'tcp' ? link : { kind: 'tcp', host: '', port: 0, mode: 'raw', baudRate: usualBaud },
+    link.kind === 'tcp' ? link : { kind: 'tcp', host: '', port: NaN, mode: 'raw', baudRate: usualBaud },
   );
-  const baudRate = Number(baud);
+  const [port, setPort] = useState(link.kind === 'tcp' ? String(link.port) : '');
+  const wrong = { ...wrongFields(link), ...errors };
   const serial = (change: { path?: string; baud?: string }) => {
     const next = { path, baud, ...change };
     setPath(next.path);
     setBaud(next.baud);
-    onChange({ kind: 'serial', path: next.path.trim(), baudRate: Number(next.baud) || usualBaud });
+    onChange({ kind: 'serial', path: next.path.trim(), baudRate: numberOf(next.baud) });
   };
-  const choosePort = (port: SerialPortView) => {
-    const chosen = port.stablePath ?? port.path;
+  const choosePort = (found: SerialPortView) => {
+    const chosen = found.stablePath ?? found.path;
     setPath(chosen);
-    onChange({ kind: 'serial', path: chosen, baudRate: Number(baud) || usualBaud, ...(port.usb === null ? {} : { usb: port.usb }) });
+    onChange({ kind: 'serial', path: chosen, baudRate: numberOf(baud), ...(found.usb === null ? {} : { usb: found.usb }) });
   };
   const overNetwork = (next: NetworkLink) => {
     setNetwork(next);
     onChange(next);
+  };
+  const typePort = (text: string) => {
+    setPort(text);
+    overNetwork({ ...network, port: numberOf(text) });
   };
   const choose = (kind: LinkSettings['kind']) => {
     if (kind === 'serial') return serial({});
@@ -62,7 +71,7 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
         onChange={choose}
       />
       {(link.kind === 'board' || link.kind === 'simulated') && <Label>{insideServer[link.kind]}</Label>}
-      {link.kind === 'tcp' && <NetworkFields link={network} onChange={overNetwork} errors={errors} />}
+      {link.kind === 'tcp' && <NetworkFields link={network} onChange={overNetwork} port={port} onPort={typePort} wrong={wrong} />}
       {link.kind === 'serial' && (
         <>
           <PortList chosen={path} onChoose={choosePort} />
@@ -73,7 +82,7 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
             mono
             placeholder="/dev/serial/by-id/…"
             hint="As the server sees it. A name under /dev/serial/by-id stays the same whatever is plugged in; one like /dev/ttyUSB0 does not."
-            error={errors['path']}
+            error={path.trim() === '' ? undefined : wrong['path']}
             testID="link-path"
           />
           <Field
@@ -82,10 +91,8 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
             onChange={(next) => serial({ baud: next })}
             type="number"
             unit="baud"
-            error={
-              errors['baudRate'] ??
-              (Number.isInteger(baudRate) && baudRate >= 300 && baudRate <= 1_000_000 ? undefined : 'a whole number from 300 to 1 000 000')
-            }
+            error={wrong['baudRate']}
+            testID="link-baud"
           />
         </>
       )}

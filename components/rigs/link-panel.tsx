@@ -21,7 +21,7 @@ export function LinkPanel({ rig }: { rig: RigView }) {
             <Body strong>{linkName(rig.link)}</Body>
             <Label>
               {roundTripMs === null ? 'no reply yet' : `reply within ${formatSignificant(roundTripMs, 2)} ms`}
-              {discardedLines === 0 ? '' : `, ${discardedLines} garbled lines set aside`}
+              {discardedLines === 0 ? '' : `, ${discardedLines} garbled ${discardedLines === 1 ? 'line' : 'lines'} set aside`}
             </Label>
           </View>
         </View>

@@ -7,7 +7,7 @@ import { Body, Button, Check, Heading, Icon, Loading, Panel, ProblemNotice, Scre
 import { takeController } from '@/shared/contracts/link';
 import { changeLink, tryLink, type LinkSettings, type RigView } from '@/shared/contracts/rigs';
 import { LinkForm } from './link-form';
-import { linkName } from './link-words';
+import { linkName, wrongFields } from './link-words';
 import { useRefreshRigs, useRig } from './use-rig';
 
 /** The page on which the line to a rig's controller is chosen and tried. */
@@ -124,7 +124,7 @@ function LinkChoice({ rig, etag }: { rig: RigView; etag: string | undefined }) {
   });
   const problem = attempt.error ?? save.error;
   const params = { rigId: rig.id };
-  const incomplete = link.kind === 'serial' ? link.path.trim() === '' : link.kind === 'tcp' && (link.host === '' || link.port === 0);
+  const unusable = Object.keys(wrongFields(link)).length > 0;
   if (!mayEdit.ok) return <Body tone="dim">{mayEdit.why}</Body>;
   return (
     <>
@@ -145,7 +145,7 @@ function LinkChoice({ rig, etag }: { rig: RigView; etag: string | undefined }) {
         icon="link"
         label="Try: say hello, move nothing"
         busy={attempt.isPending}
-        disabled={incomplete}
+        disabled={unusable}
         onPress={() => attempt.mutate({ params, body: link })}
         testID="try-link"
       />
@@ -154,7 +154,7 @@ function LinkChoice({ rig, etag }: { rig: RigView; etag: string | undefined }) {
         size="action"
         label="Use this link"
         busy={save.isPending}
-        disabled={incomplete}
+        disabled={unusable}
         onPress={() => save.mutate({ params, ifMatch: etag, body: link })}
         testID="save-link"
       />

@@ -1,6 +1,6 @@
 import { serverNowMs } from '@/components/api';
 import type { Tone } from '@/components/ui';
-import type { LinkSettings, RigLive } from '@/shared/contracts/rigs';
+import { linkSettingsSchema, type LinkSettings, type RigLive } from '@/shared/contracts/rigs';
 import { formatAgo } from '@/shared/lib/format-duration';
 
 export interface LinkState {
@@ -32,4 +32,11 @@ export function linkName(link: LinkSettings): string {
   if (link.kind === 'simulated') return 'Simulated controller';
   if (link.kind === 'board') return 'Emulated controller board';
   return link.kind === 'serial' ? `${link.path}, ${link.baudRate} baud` : `${link.host}, port ${link.port}`;
+}
+
+/** What would be right, by field; empty where the server would take the link as it is. */
+export function wrongFields(link: LinkSettings): Record<string, string> {
+  const found: Record<string, string> = {};
+  for (const { path, message } of linkSettingsSchema.safeParse(link).error?.issues ?? []) found[path.join('.')] ??= message;
+  return found;
 }

@@ -6,11 +6,15 @@ export type NetworkLink = Extract<LinkSettings, { kind: 'tcp' }>;
 interface NetworkFieldsProps {
   link: NetworkLink;
   onChange: (link: NetworkLink) => void;
-  errors: Record<string, string>;
+  /** The port as it was typed. */
+  port: string;
+  onPort: (text: string) => void;
+  /** What would be right, by field. */
+  wrong: Record<string, string>;
 }
 
 /** A network serial server: where it is, and whether it is told the speed of its port. */
-export function NetworkFields({ link, onChange, errors }: NetworkFieldsProps) {
+export function NetworkFields({ link, onChange, port, onPort, wrong }: NetworkFieldsProps) {
   return (
     <>
       <Field
@@ -20,17 +24,10 @@ export function NetworkFields({ link, onChange, errors }: NetworkFieldsProps) {
         mono
         placeholder="10.0.0.4"
         hint="Name or address of the serial server, as this server reaches it. Nothing but the controller's protocol is spoken there."
-        error={errors['host']}
+        error={link.host === '' ? undefined : wrong['host']}
         testID="link-host"
       />
-      <Field
-        label="Port"
-        value={link.port === 0 ? '' : String(link.port)}
-        onChange={(port) => onChange({ ...link, port: Number(port) || 0 })}
-        type="number"
-        error={errors['port']}
-        testID="link-port"
-      />
+      <Field label="Port" value={port} onChange={onPort} type="number" error={port === '' ? undefined : wrong['port']} testID="link-port" />
       <Tabs
         label="How bytes travel"
         value={link.mode}

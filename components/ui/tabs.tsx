@@ -34,7 +34,7 @@ export function Tabs<V extends string>({ label, value, options, onChange, testID
             className={`min-h-target flex-1 items-center justify-center rounded-xl px-3 ${chosen ? 'bg-panel2' : ''}`}
           >
             <View className={`border-b-2 ${chosen ? 'border-lamp' : 'border-panel'}`}>
-              <Body strong={chosen} tone={chosen ? 'text' : 'dim'}>
+              <Body strong={chosen} tone={chosen ? 'text' : 'dim'} className="text-center">
                 {option.label}
               </Body>
             </View>

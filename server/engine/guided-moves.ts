@@ -1,4 +1,5 @@
-import type { RigMotion } from '@/shared/rig/document';
+import { homingObstacle } from '@/shared/protocol/homing';
+import type { RigDocument, RigMotion } from '@/shared/rig/document';
 import { keepOutEntered } from '@/shared/rig/travel';
 import type { Cancel, Clock } from '../interfaces/clock';
 import type { ControllerLimits, LinkEvent, TeachOutcome, TurntableLink } from '../interfaces/turntable-link';
@@ -27,6 +28,7 @@ export interface GuidedRig {
   labId: string;
   rigId: string;
   name: string;
+  document: RigDocument;
   motion: RigMotion;
 }
 
@@ -171,6 +173,7 @@ export class GuidedMoves {
     if (isUnderWay(session.state))
       throw new GuidedRefused('not-possible-now', 'The order before is still under way. Wait until the turntable stands still.');
     if (order.kind === 'nudge') assertNudge(session.rig.motion, link, order);
+    if (order.kind === 'home') assertHoming(session.rig, link, order);
     return session;
   }
 
@@ -179,7 +182,7 @@ export class GuidedMoves {
     const session = this.sessions.get(rigId);
     if (session === undefined) return 'Nobody is at the guided first move.';
     try {
-      this.assertMayOrder({ rigId, sessionId: session.id, userId: session.by.id }, { kind: 'home' });
+      this.assertMayOrder({ rigId, sessionId: session.id, userId: session.by.id }, { kind: 'teach' });
       return '';
     } catch (error) {
       if (error instanceof GuidedRefused) return error.message;
@@ -243,11 +246,12 @@ export class GuidedMoves {
   }
 
   /** The rig has a new revision: its line was opened anew. */
-  revised(rigId: string, motion: RigMotion): void {
+  revised(rigId: string, document: RigDocument): void {
     const session = this.sessions.get(rigId);
-    if (session === undefined) return;
+    const { motion } = document;
+    if (session === undefined || motion === undefined) return;
     // Edge passes were counted in the steps of the revision before.
-    session.rig = { ...session.rig, motion };
+    session.rig = { ...session.rig, document, motion };
     session.state = { ...session.state, edges: [] };
     this.parts.onChange(rigId);
   }
@@ -341,10 +345,8 @@ export class GuidedMoves {
 
 export type GuidedRequest = MoveRequest | { kind: 'teach' };
 
-export type MoveRequest =
-  | { kind: 'home' }
-  /** `intoKeepOut`: whoever orders looks at the gap and means to go into an arc that is kept out of runs. */
-  | { kind: 'nudge'; steps: number; intoKeepOut: boolean };
+/** `intoKeepOut`: whoever orders looks at the gap and means to go into an arc that is kept out of runs. */
+export type MoveRequest = { kind: 'home'; intoKeepOut: boolean } | { kind: 'nudge'; steps: number; intoKeepOut: boolean };
 
 /** The longest nudge that the controller takes, microsteps (SPEC 8.9): a 36th of its soft travel, rounded up. */
 export function longestNudgeSteps(motion: RigMotion, link: TurntableLink): number {
@@ -368,5 +370,15 @@ function assertNudge(motion: RigMotion, link: TurntableLink, { steps, intoKeepOu
     throw new GuidedRefused(
       'not-possible-now',
       `This nudge would enter what is kept out of runs: ${met}. Say that you look at the gap, or turn the other way.`,
+    );
+}
+
+/** Homing turns by itself, with masses on the table perhaps: where it might not turn towards the middle somebody has to look. */
+function assertHoming({ document }: GuidedRig, link: TurntableLink, { intoKeepOut }: Extract<GuidedRequest, { kind: 'home' }>): void {
+  const obstacle = intoKeepOut ? null : homingObstacle(document, link.controller()?.angleDeg ?? null);
+  if (obstacle !== null)
+    throw new GuidedRefused(
+      'not-possible-now',
+      `The rig does not home by itself: ${obstacle}. Say that you look at the gap, or correct the rig document.`,
     );
 }

@@ -4,6 +4,7 @@ import { may, roles, type Act } from '@/shared/contracts/roles';
 import type { IdempotencyAnswer, IdempotencyPort } from '../interfaces/idempotency';
 import { checkedResponse } from './check-response';
 import { invalidInput, isDatabaseAway } from './errors';
+import { fieldWords } from './field-words';
 import { actOnce, fingerprintOf, idempotencyKeyOf, rethrowKeptProblem } from './idempotent';
 import { linkToNext } from './paging';
 import { notFound, ProblemError } from './problem-error';
@@ -144,7 +145,7 @@ function assertMay(membership: Membership, act: Act, services: Services): void {
 function parsed(where: 'query' | 'body', contract: RouteContract, value: unknown): unknown {
   const schema = contract[where];
   if (schema === undefined) return undefined;
-  const result = schema.safeParse(value);
+  const result = schema.safeParse(value, { error: fieldWords });
   if (!result.success) throw invalidInput(where, result.error);
   return result.data;
 }

@@ -22,7 +22,7 @@ const INPUTS: [number, string][] = [
 
 /**
  * Opens a line, asks who is there and closes it again. The question changes nothing in the controller and moves nothing
- * (SPEC 4, `ident`). Never rejects.
+ * (SPEC 4, `ident`), and every version answers it alike (SPEC 5.7). Never rejects.
  */
 export async function tryLink({ factory, clock }: { factory: ByteLineFactory; clock: Clock }): Promise<Trial> {
   let dropped = 0;

@@ -117,6 +117,8 @@ export type LineMessage = z.infer<typeof lineMessageSchema>;
 
 const rigPath = '/labs/:labId/rigs/:rigId';
 const guidedPath = `${rigPath}/guided`;
+/** Whoever orders looks at the gap and means to enter an arc that is kept out of runs. */
+const intoKeepOut = z.boolean().default(false);
 /** When the tap was made, by the page's clock corrected to the server's: a tap that moves something counts for 5 s. */
 const tappedAt = instantSchema.optional();
 const orderProblems = [
@@ -220,8 +222,7 @@ export const nudge = defineRoute({
     guidedId: idSchema,
     /** Microsteps. */
     steps: z.number().int().min(-1_000_000).max(1_000_000),
-    /** Whoever nudges looks at the gap and means to enter an arc that is kept out of runs. */
-    intoKeepOut: z.boolean().default(false),
+    intoKeepOut,
     tappedAt,
   }),
   response: guidedViewSchema,
@@ -235,7 +236,7 @@ export const homeByHand = defineRoute({
   access: 'run.start',
   status: 202,
   idempotent: true,
-  body: z.strictObject({ guidedId: idSchema, tappedAt }),
+  body: z.strictObject({ guidedId: idSchema, intoKeepOut, tappedAt }),
   response: guidedViewSchema,
   problems: orderProblems,
 });

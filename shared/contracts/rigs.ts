@@ -5,8 +5,14 @@ import { positionViewSchema } from './position';
 import { defineRoute } from './route';
 import { signatureViewSchema, standingSchemas } from './standing';
 
+/** With the same words on the page and from the server. */
+function wholeNumber(least: number, greatest: number) {
+  const words = `a whole number from ${String(least)} to ${String(greatest)} is needed`;
+  return z.number(words).int(words).min(least, words).max(greatest, words);
+}
+
 const portFields = {
-  baudRate: z.number().int().min(300).max(1_000_000).default(115200),
+  baudRate: wholeNumber(300, 1_000_000).default(115200),
   /** Levels of the control lines after opening; left as they are when absent. */
   dtr: z.boolean().optional(),
   rts: z.boolean().optional(),
@@ -24,7 +30,7 @@ export const linkSettingsSchema = z.discriminatedUnion('kind', [
   z.strictObject({ kind: z.literal('board') }),
   z.strictObject({
     kind: z.literal('serial'),
-    path: z.string().min(1).max(300),
+    path: z.string().min(1).max(300, 'a path of at most 300 characters is needed'),
     ...portFields,
     /** The device that was listed under the path when it was chosen: it is found again under another name. */
     usb: usbIdentitySchema.optional(),
@@ -36,8 +42,11 @@ export const linkSettingsSchema = z.discriminatedUnion('kind', [
     host: z
       .string()
       .max(253)
-      .regex(/^[A-Za-z0-9:]([A-Za-z0-9:.-]*[A-Za-z0-9:])?$/, 'a host name or an address is needed, without http:// and without a port'),
-    port: z.number().int().min(1).max(65535),
+      .regex(
+        /^(?=[^:]*$|.*:.*:)[A-Za-z0-9:]([A-Za-z0-9:.-]*[A-Za-z0-9:])?$/,
+        'a host name or an address is needed, without http:// and without a port',
+      ),
+    port: wholeNumber(1, 65_535),
     /** `rfc2217` also sets the rate at the other end; `raw` needs it set there. */
     mode: z.enum(['raw', 'rfc2217']).default('raw'),
     ...portFields,

@@ -16,7 +16,7 @@ Code refuse(Code code, uint32_t& detail, uint32_t value) {
 
 uint32_t size(int32_t value) { return value < 0 ? static_cast<uint32_t>(-value) : static_cast<uint32_t>(value); }
 
-/** What every order to move needs (SPEC 8.5, 8.9). */
+/** What every order to move needs (SPEC 8.5, 8.9); one at a time (SPEC 8.3). */
 Code circumstances(const Request& request) {
   if (isRepeat(request.tag)) return Code::repeat;
   if (active.state != State::rest) return Code::busy;

@@ -13,6 +13,7 @@ Body body;
 
 namespace {
 
+/** SPEC 8.7, 11.5. */
 void release() {
   body.known = false;
   body.driversOn = false;
@@ -93,6 +94,7 @@ void pollWarning(Tick now) {
 
 }  // namespace
 
+/** SPEC 8.8, 11.5. */
 void switchDriversOn() {
   body.driversOn = true;
   hal::setDrivers(true);

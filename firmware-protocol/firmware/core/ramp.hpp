@@ -3,6 +3,8 @@
  * c(n) = c(0)·(√(n+1) − √n) with c(0) = √(2/a). Small levels come from a table of exact ratios, larger ones from the
  * recurrence c(n) = c(n−1) − 2·c(n−1)/(4n+1) in whole ticks with a carried rest (D. Austin, Generate stepper-motor
  * speed profiles in real time, Embedded Systems Programming 2005). Everything rounds to longer intervals (SPEC 8.1).
+ * With the recurrence from the first level on, c(0) would have to be taken 0.676 times as long to make up for its error there; exact ratios
+ * have no such error, and so begin with c(0) itself.
  */
 #pragma once
 #include <stdint.h>

@@ -11,7 +11,7 @@ enum class Admission : uint8_t { fresh, repetition, refused };
 void start();
 /** SPEC 3.2, 3.3. The new session, 0 when the epoch is too low. */
 uint32_t open(uint32_t epoch);
-/** SPEC 3.4 and 3.6. `code` and `detail` when refused. */
+/** SPEC 3.4 and 3.6. `code` and `detail` when refused, which changes nothing (SPEC 3.7). */
 Admission admit(const Request& request, const char* text, uint8_t length, Code& code, uint32_t& detail);
 /** Whether it is the last request once more, byte for byte. */
 bool isRepetition(const Request& request, const char* text, uint8_t length);

@@ -1,6 +1,6 @@
 import { uniformInt } from 'pure-rand/distribution/uniformInt';
 import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
-import type { ByteLineFactory } from '@/server/interfaces/byte-line';
+import type { ByteLine, ByteLineFactory } from '@/server/interfaces/byte-line';
 import type { Clock } from '@/server/interfaces/clock';
 
 /** What may happen to a line of bytes on its way; `mixed` is any of those before it. */
@@ -13,6 +13,8 @@ export interface FaultyLine {
   factory: ByteLineFactory;
   /** From now on every line passes as it is. */
   heal(): void;
+  /** Another program on the port writes a line, line feed included. */
+  interject(line: string): void;
 }
 
 /** Lines of devices that speak something else (made up). */
@@ -98,6 +100,7 @@ export function faultyLine(inner: ByteLineFactory, clock: Clock, { fault, seed, 
   const upTo = (greatest: number) => uniformInt(random, 0, greatest);
   const mixable = lineFaults.filter((kind) => kind !== 'mixed');
   let healthy = false;
+  let current: ByteLine | null = null;
 
   /** A way for lines, in one direction. */
   function way(deliver: (line: string) => void, isInbound: boolean): (line: string) => void {
@@ -115,10 +118,10 @@ export function faultyLine(inner: ByteLineFactory, clock: Clock, { fault, seed, 
   const factory: ByteLineFactory = {
     ...inner,
     open: async ({ onLine, onClosed }) => {
-      const line = await inner.open({ onLine: way(onLine, true), onClosed });
+      const line = (current = await inner.open({ onLine: way(onLine, true), onClosed }));
       const outbound = way((text) => line.write(`${text}\n`), false);
       return { write: (bytes) => outbound(bytes.slice(0, -1)), close: () => line.close() };
     },
   };
-  return { factory, heal: () => void (healthy = true) };
+  return { factory, heal: () => void (healthy = true), interject: (line) => current?.write(line) };
 }

@@ -54,6 +54,7 @@ export interface Scene {
   at(ms: number, deed: () => void): void;
   lease: { mayRenew: boolean };
   onMove(deed: () => void): void;
+  interject(line: string): void;
 }
 
 const settle = async () => {
@@ -104,7 +105,7 @@ export async function runNight(situation: Situation, seed: number): Promise<Nigh
   };
   sample({ clock, controller, night });
   order(at, issue, { seed, clock });
-  situation.act?.({ clock, controller, night, link, upTo, at, lease, onMove: (deed) => (onMove = deed) });
+  situation.act?.({ clock, controller, night, link, upTo, at, lease, onMove: (deed) => (onMove = deed), interject: line.interject });
   await clock.advance(HEALED_MS);
   line.heal();
   lease.mayRenew = true;

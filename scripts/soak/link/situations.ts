@@ -1,4 +1,6 @@
+import { encode, NO_SESSION } from '@/firmware-protocol/codec';
 import { createLink } from '@/server/links/link-driver';
+import { sealed } from '../fuzz/almost-lines';
 import { lineFaults, type LineFault } from './faulty-line';
 import { soakRig, type Scene } from './night';
 
@@ -90,6 +92,16 @@ function olderDriver(scene: Scene): void {
   });
 }
 
+/** A host of another major version on the same port: it greets again and again, and orders in words of its own (SPEC 14.4). */
+function strangeHost({ at, upTo, interject }: Scene): void {
+  for (let ms = 1_000 + upTo(2_000); ms < 28_000; ms += 800 + upTo(4_000))
+    at(ms, () => {
+      const request = { kind: 'request', epoch: 7, session: NO_SESSION, number: upTo(65_535) } as const;
+      interject(encode({ ...request, order: { word: 'hello', major: 2, minor: upTo(9) } }));
+      interject(sealed(`q 7 ${NO_SESSION} ${upTo(65_535)} turn ${upTo(3_000)} soon`));
+    });
+}
+
 export const situations: readonly Situation[] = [
   ...lineFaults.map((line) => ({ name: line, line, share: 0.15 })),
   { name: 'reply-lost', line: 'reply-lost', share: 0.6 },
@@ -103,6 +115,7 @@ export const situations: readonly Situation[] = [
   { name: 'reset-waiting', share: 0.02, restarts: true, act: reset(WAITING) },
   { name: 'reset-at-command', share: 0.02, restarts: true, act: resetAtCommand },
   { name: 'older-driver', share: 0, restarts: true, act: olderDriver },
+  { name: 'strange-host', share: 0.02, act: strangeHost },
   { name: 'lease-moving', share: 0.02, act: lapse(MOVING) },
   { name: 'lease-waiting', share: 0.02, act: lapse(WAITING) },
   { name: 'interlock-moving', share: 0.02, act: forbids('interlock', MOVING) },

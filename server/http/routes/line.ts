@@ -30,7 +30,7 @@ function guidedRig(rig: RigRecord): GuidedRig {
       'not-ready',
       `The document of ${rig.name} has no motion data. Enter steps per degree and limits as the drive's data sheet gives them; the first move then measures them.`,
     );
-  return { labId: rig.labId, rigId: rig.id, name: rig.name, motion };
+  return { labId: rig.labId, rigId: rig.id, name: rig.name, document: rig.document, motion };
 }
 
 /** Runs a piece of the engine and says its refusals as problems. */
@@ -121,7 +121,7 @@ const guidedRoutes = [
     return give(context, context.body, { kind: 'nudge', steps, intoKeepOut });
   }),
 
-  mount(contracts.homeByHand, (context) => give(context, context.body, { kind: 'home' })),
+  mount(contracts.homeByHand, (context) => give(context, context.body, { kind: 'home', intoKeepOut: context.body.intoKeepOut })),
 ];
 
 const limitsOfDocument = (motion: RigMotion): ControllerLimits => ({

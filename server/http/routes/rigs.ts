@@ -77,7 +77,7 @@ const rigRouteList = [
       services.reviews.drop(rig.id);
       await services.stations.put(rig);
     }
-    if (rig.document.motion !== undefined) services.guided.revised(rig.id, rig.document.motion);
+    services.guided.revised(rig.id, rig.document);
     context.setEtag(rigTag(context.services, rig));
     return rigViewOf(services, rig);
   }),

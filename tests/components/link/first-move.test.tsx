@@ -230,3 +230,15 @@ test('a nudge towards a keep-out arc wants to be meant, and one that is too long
   expect(screen.getByTestId('nudge-pad').textContent).toContain('a whole number from 1 to 433');
   expect(screen.getByTestId('nudge-cw')).toHaveProperty('disabled', true);
 });
+
+test('homing that might turn the wrong way wants to be meant', async () => {
+  const motion = { ...(demoRigWide.motion as RigMotion), keepOut: [[100, 110]] as [number, number][] };
+  await open('keeper', { ...done(8), controller: { ...controller, positionKnown: false, angleDeg: null } }, { ...demoRigWide, motion });
+  await press('turned-ccw');
+  fireEvent.click(screen.getByText('3 Travel'));
+  expect(screen.getByTestId('homing-obstacle').textContent).toContain('its travel is not free: it meets the keep-out arc 100° to 110°');
+  expect(screen.getByTestId('home')).toHaveProperty('disabled', true);
+  await press('home-all-the-same');
+  await press('home');
+  expect(lab.requests(`POST ${path}/guided/home`)[0]?.body).toMatchObject({ intoKeepOut: true });
+});

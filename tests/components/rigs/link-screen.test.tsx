@@ -116,3 +116,25 @@ test('a port of the server is chosen with a tap, under the name that stays and w
     usb,
   });
 });
+
+test.each([
+  ['link-baud', 'fast', 'Serial line', 'a whole number from 300 to 1000000 is needed'],
+  ['link-baud', '9600.5', 'Serial line', 'a whole number from 300 to 1000000 is needed'],
+  ['link-path', `/dev/${'x'.repeat(300)}`, 'Serial line', 'a path of at most 300 characters is needed'],
+  ['link-port', 'telnet', 'Network', 'a whole number from 1 to 65535 is needed'],
+  ['link-port', '70000', 'Network', 'a whole number from 1 to 65535 is needed'],
+  ['link-host', '10.0.0.4:4001', 'Network', 'without a port'],
+])('%s "%s" is neither tried nor used: the page says what would be right, and keeps it', async (field, typed, kind, words) => {
+  await open('keeper');
+  fireEvent.click(screen.getByText(kind));
+  const right = { 'link-path': '/dev/ttyUSB0', 'link-host': '10.0.0.4', 'link-port': '4001', 'link-baud': '9600' };
+  for (const [name, value] of Object.entries(right)) {
+    const place = screen.queryByTestId(name);
+    if (place !== null) fireEvent.change(place, { target: { value } });
+  }
+  expect(screen.getByTestId('save-link').getAttribute('aria-disabled')).toBeNull();
+  fireEvent.change(screen.getByTestId(field), { target: { value: typed } });
+  expect(screen.getByText(new RegExp(words))).toBeTruthy();
+  expect(screen.getByTestId(field)).toHaveProperty('value', typed);
+  for (const act of ['try-link', 'save-link']) expect(screen.getByTestId(act).getAttribute('aria-disabled')).toBe('true');
+});

@@ -26,7 +26,7 @@ export interface LinkBench {
 }
 
 /** What some benches cannot do. */
-export type BenchDeed = 'armKey' | 'reset';
+export type BenchDeed = 'armKey' | 'interlock' | 'reset';
 
 export interface BenchMaker {
   name: string;

@@ -2,7 +2,7 @@ import type { ControllerLimits } from '@/server/interfaces/turntable-link';
 import { testWith, type BenchMaker } from './bench';
 import type { Scene } from './scene';
 
-/** What a person at the rig does with the arm key turned: nudges, and limits that are taught. */
+/** What a person at the rig does: nudges and limits that are taught with the arm key turned, and the guard that is opened. */
 export function atTheRigConformance(maker: BenchMaker, scene: Scene): void {
   testWith(maker, 'armKey')('turns by a nudge only while the arm key says that somebody is there, and never far', async () => {
     await scene.begin();
@@ -51,4 +51,33 @@ export function atTheRigConformance(maker: BenchMaker, scene: Scene): void {
     expect(scene.watch.link.limits()).toEqual(narrow);
     expect(await scene.settled(scene.watch.link.teach(wide))).toEqual({ taught: true, limits: wide });
   });
+
+  testWith(maker, 'interlock')(
+    'brakes when the interlock opens in a motion; closing it starts nothing, and the warning is due again',
+    async () => {
+      await scene.begin();
+      await scene.watch.ready();
+      const away = (await scene.bench.trueAngleDeg()) > 0 ? -150 : 150;
+      const move = scene.watch.move(away);
+      const began = await scene.watch.get('motion-began', { of: move });
+      await scene.bench.pass(600);
+      await scene.bench.interlock('open');
+      const ended = await scene.watch.get('motion-ended', { of: move, withinMs: 60_000 });
+      expect(ended.cause).toBe('interlock');
+      const opened = await scene.watch.get('interlock');
+      expect(opened.closed).toBe(false);
+      // From 30°/s at 60°/s² within half a second, by the controller's own stamps.
+      expect(ended.at.utcMs - opened.at.utcMs).toBeLessThan(520);
+      expect(opened.at.utcMs).toBeGreaterThan(began.at.utcMs);
+      expect((await scene.watch.get('refused', { of: scene.watch.move(away) })).code).toBe('interlock');
+      const standsAt = await scene.bench.trueAngleDeg();
+      await scene.bench.interlock('closed');
+      await scene.watch.get('interlock', { nth: 1 });
+      await scene.bench.pass(1_500);
+      expect(await scene.bench.trueAngleDeg()).toBe(standsAt);
+      expect(scene.watch.all('motion-began')).toHaveLength(1);
+      expect(scene.watch.link.controller()).toMatchObject({ interlockClosed: true, warningDue: true, moving: false });
+      expect(ended.angleDeg).toBeCloseTo(standsAt, 9);
+    },
+  );
 }

@@ -19,7 +19,7 @@ if (path === undefined) {
   const maker: BenchMaker = {
     name: path,
     firmware: 'evenfall-1.0',
-    ...(hands ? {} : { cannot: { armKey: noHands, reset: noHands } }),
+    cannot: { interlock: 'the guard is opened by hand: docs/wiring.md, First turn', ...(hands ? {} : { armKey: noHands, reset: noHands }) },
     // An adapter keeps bytes back for up to 16 ms.
     beginToleranceS: 0.02,
     noiseMs: 400,

@@ -60,7 +60,11 @@ export class ProcessBenches {
       },
       drop: (ms) => tell(`drop ${ms}`),
       garbage: (ms) => tell(`garbage ${ms}`),
-      interlock: (level) => tell(`interlock ${level}`),
+      interlock: async (level) => {
+        // Then it warns for 10 s before its next motion.
+        if (await isKept()) this.kept = null;
+        await tell(`interlock ${level}`);
+      },
       armKey: (level) => tell(`key ${level}`),
       unplug: () => process.unplug(),
       plug: () => process.plug(),

@@ -30,7 +30,7 @@ async function makeBench(motion: RigMotion = demoRigWide.motion as RigMotion, st
   link.subscribe((event) => moves.heard('north', event));
   link.open();
   await clock.advance(3_000);
-  const rig: GuidedRig = { labId: 'lab', rigId: 'north', name: 'North bench', motion };
+  const rig: GuidedRig = { labId: 'lab', rigId: 'north', name: 'North bench', document: { ...demoRigWide, motion }, motion };
   const asked = { rigId: 'north', sessionId: 's-1', userId: anna.id };
   /** Time goes by with the page open, which answers each beat of the stream after 120 ms. */
   const stay = async (seconds: number) => {
@@ -54,6 +54,8 @@ async function begun(motion?: RigMotion, start?: { startDeg?: number; homed?: bo
 }
 
 const nudge = (steps: number, intoKeepOut = false) => ({ kind: 'nudge', steps, intoKeepOut }) as const;
+
+const home = { kind: 'home', intoKeepOut: false } as const;
 
 function refusal(act: () => unknown): GuidedRefused {
   try {
@@ -223,13 +225,29 @@ test('a move cut short while the position is unknown begins the count anew', asy
 
 test('homing by hand finds the edge; passes of it are kept with their steps and direction', async () => {
   const { moves, asked, stay, state, link } = await begun(undefined, { homed: false, startDeg: 2 });
-  moves.order(asked, { kind: 'home' });
+  moves.order(asked, home);
   await stay(15);
   expect(state()).toMatchObject({ order: { kind: 'home', state: 'done' }, edges: [{ steps: 0, direction: 'ccw' }] });
   expect(link.controller()).toMatchObject({ positionKnown: true, angleDeg: 0 });
   moves.order(asked, nudge(-40));
   await stay(4);
   expect(state()?.edges.at(-1)).toMatchObject({ direction: 'cw' });
+});
+
+test('a rig whose way to the edge may not be free homes only when somebody says that they look at it', async () => {
+  const motion = { ...(demoRigNarrow.motion as RigMotion), homeDeg: 31 };
+  const { moves, asked, stay, state, angle } = await begun(motion, { homed: false, startDeg: 33 });
+  const before = angle();
+  expect(moves.whyNot('north')).toBe('');
+  expect(refusal(() => moves.order(asked, home))).toMatchObject({
+    code: 'not-possible-now',
+    message: expect.stringMatching(/does not home by itself: .* does not lie between near and far/),
+  });
+  await stay(4);
+  expect(angle()).toBe(before);
+  moves.order(asked, { ...home, intoKeepOut: true });
+  await stay(30);
+  expect(state()?.order).toMatchObject({ kind: 'home', state: 'done' });
 });
 
 test('one person at a time, and ending gives the rig free and holds what moves', async () => {

@@ -1,3 +1,4 @@
+import * as fc from 'fast-check';
 import { mkdirSync, mkdtempSync, rmSync, symlinkSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
@@ -49,6 +50,26 @@ test('a strange device that has taken the name is not spoken to', async () => {
     code: 'another-device',
     message: expect.stringContaining('is another device now'),
   });
+});
+
+test('wherever it is plugged in again and whatever takes its old name, its own port is opened or none', async () => {
+  const names = [gone, '/dev/ttyUSB78', '/dev/ttyUSB79', '/dev/ttyACM77'];
+  const device = fc.constantFrom(usb, { ...usb, serialNumber: 'B7' }, { ...usb, vendorId: '2341' }, null, 'nothing' as const);
+  await fc.assert(
+    fc.asyncProperty(fc.array(fc.tuple(device, device, device, device), { minLength: 1, maxLength: 8 }), async (pluggings) => {
+      for (const plugged of pluggings) {
+        const ports = names.flatMap((path, index) => {
+          const what = plugged[index];
+          return what === undefined || what === 'nothing' ? [] : [port(path, { usb: what })];
+        });
+        const own = ports.filter((one) => one.usb === usb).map(({ path }) => path);
+        const found = await findPort({ path: gone, usb }, listed(...ports)).catch(({ code }: { code: string }) => code);
+        if (own.length === 1) expect(found).toMatchObject({ path: own[0], usb });
+        else expect(['missing', 'another-device']).toContain(found);
+      }
+    }),
+    { numRuns: 50, seed: 77 },
+  );
 });
 
 test('stable names are found by where they lead', async () => {

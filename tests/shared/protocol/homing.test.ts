@@ -17,6 +17,13 @@ describe('whether a rig may home by itself', () => {
     expect(homingObstacle(demoRigNarrow, null)).toBeNull();
   });
 
+  test('a travel of a full turn or more leaves the level of the flag without meaning; from a known place it is not needed', () => {
+    const full = with_(demoRigWide, { minDeg: -180, maxDeg: 180 });
+    expect(homingObstacle(full, null)).toMatch(/180° to 180° is a full turn or more/);
+    expect(homingObstacle(full, 90)).toBeNull();
+    expect(homingObstacle(with_(demoRigWide, { minDeg: -179, maxDeg: 180 }), null)).toBeNull();
+  });
+
   test('an edge that is not between near and far does not tell which way is safe', () => {
     expect(homingObstacle(with_(demoRigNarrow, { homeDeg: 31 }), null)).toMatch(/31°\) does not lie between near and far/);
     expect(homingObstacle(with_(demoRigNarrow, { homeDeg: 31 }), 60)).toBeNull();
