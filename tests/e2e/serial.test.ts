@@ -9,7 +9,7 @@ import { RealServer } from './support/real-server';
 
 /**
  * In real time: a run that a browser starts goes through the server's own engine, link and serial port class, and a pseudo-terminal, to the
- * light simulated controller in a process of its own (with the firmware behind the pseudo-terminal: board-serial.test.ts and the soak `realtime`). The line is cut in the middle of a dwell and comes back; the run goes on,
+ * controller's firmware on the emulated board in a process of its own. The line is cut in the middle of a dwell and comes back; the run goes on,
  * and the log shows the gap.
  */
 
@@ -34,7 +34,7 @@ const document: ProtocolDocument = {
 };
 
 beforeAll(async () => {
-  controller = new ControllerProcess(['--homed', '--warned'], { ...demoRigWide, stations: {}, motion: benchRig });
+  controller = new ControllerProcess(['--board', '--homed'], { ...demoRigWide, stations: {}, motion: benchRig });
   await controller.start();
   server = await RealServer.start();
   hand = new Hand(await server.open('phone', 'keeper'));
