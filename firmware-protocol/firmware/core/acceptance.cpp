@@ -143,6 +143,10 @@ Code order(const Request& request, uint32_t& detail) {
   const Tick now = hal::ticks();
   const Code code = whenToBegin(request, now, detail);
   if (code != Code::none) return code;
+  // While the leg was worked out an input may have opened: its interrupt knows, the main loop not yet.
+  const uint8_t levels = inputs::safest();
+  if (!(levels & hal::INTERLOCK_CLOSED)) return Code::interlock;
+  if (!(levels & hal::SUPPLY_PRESENT)) return Code::supply;
   accept(request, now);
   return Code::none;
 }

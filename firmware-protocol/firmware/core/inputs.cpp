@@ -96,6 +96,7 @@ void changed(Tick at) {
     stepper::cut();
     hal::setDrivers(false);
   }
+  if (lost & hal::INTERLOCK_CLOSED) stepper::forbid();
   if (lost != 0 || others != 0) push(at, (noticed & static_cast<uint8_t>(~lost)) ^ others);
   if (others & hal::FLAG_COVERED) stepper::edge();
 }

@@ -54,7 +54,7 @@ void pollWaiting(Tick now) {
   if (active.state != State::waiting) return;
   if (active.order != Order::move) {
     if (!reached(active.begin, now)) return hal::wakeAt(active.begin);
-    const Cause cause = hindrance(inputs::levels(), now);
+    const Cause cause = hindrance(inputs::safest(), now);
     if (cause != Cause::done) return finish(cause, now);
     return beginByItself();
   }
@@ -75,7 +75,12 @@ void pollMotion() {
   const stepper::Phase phase = stepper::phase();
   if (phase != stepper::Phase::done) return;
   if (active.state == State::homing) return homingLegOver();
-  if (active.state == State::moving && stepper::position() != active.target) return fail(Fault::count);
+  if (active.state == State::moving && stepper::position() != active.target) {
+    // An interlock that opened before the first step has ended the leg, and may not yet be told.
+    inputs::tell();
+    if (active.state == State::moving) fail(Fault::count);
+    return;
+  }
   finish(active.state == State::moving ? Cause::done : active.cause, stepper::lastStep());
 }
 

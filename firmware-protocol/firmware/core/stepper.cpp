@@ -50,7 +50,7 @@ void start() {
 }
 
 void prepare(const Leg& wish) {
-  leg.phase = Phase::idle;
+  leg.phase = Phase::prepared;
   leg.edgeStops = false;
   leg.guardMet = false;
   leg.direction = wish.counterClockwise ? 1 : -1;
@@ -66,6 +66,8 @@ void prepare(const Leg& wish) {
 void goAt(Tick at) {
   leg.last = at;
   leg.current = 0;
+  // An input that forbids motion changed while the leg was worked out (SPEC 11.1, 11.2).
+  if (leg.phase != Phase::prepared) return;
   if (leg.remaining == 0) {
     leg.phase = Phase::done;
     return;
@@ -99,7 +101,13 @@ void brake(bool steep) {
 
 void cut() {
   hal::Lock lock;
+  if (leg.phase == Phase::prepared) leg.phase = Phase::cut;
   if (active()) endHere(Phase::cut);
+}
+
+void forbid() {
+  if (leg.phase == Phase::prepared) leg.phase = Phase::done;
+  if (leg.phase == Phase::armed) endHere(Phase::done);
 }
 
 void stopAtEdge(bool wanted) {

@@ -18,13 +18,13 @@ struct Leg {
 
 namespace stepper {
 
-/** `idle`: no leg since the last `rest`. `armed`: before the first step. `cut`: ended by `cut`, in the middle of anything. */
-enum class Phase : uint8_t { idle, armed, running, done, cut };
+/** `idle`: no leg since the last `rest`. `prepared`: not yet sent off. `armed`: before the first step. `cut`: ended by `cut`, in the middle of anything. */
+enum class Phase : uint8_t { idle, prepared, armed, running, done, cut };
 
 void start();
 /** Computes a leg; a few ms. Nothing may be running. */
 void prepare(const Leg& leg);
-/** First step as soon as can be, `delay` ticks later at least. Gives its tick. */
+/** First step as soon as can be, `delay` ticks later at least. Gives its tick. No step where `cut` or `forbid` came since `prepare`. */
 Tick go(Tick delay = 0);
 /** First step at `at` to the tick. Under a lock, or in an interrupt. */
 void goAt(Tick at);
@@ -32,6 +32,8 @@ void goAt(Tick at);
 void brake(bool steep);
 /** No further step at all. Also in interrupts. */
 void cut();
+/** A leg that has not made its first step makes none. In interrupts. */
+void forbid();
 /** As soon as the flag changes its level there is no further step: only for legs slow enough (SPEC 8.6). */
 void stopAtEdge(bool wanted);
 /** In the interrupt of the inputs: the flag changed. */
