@@ -32,15 +32,16 @@ const silence: Record<'page' | 'rig', string> = {
   rig: 'The server hears nothing from the controller. The run holds or goes on by its protocol.',
 };
 
-/** Says over the whole width that what is shown is old, and which leg of the line is silent. */
-export function LostNotice({ age }: { age: LinkAge }) {
+/** Says over the whole width that what is shown is old, and which leg of the line is silent, or that nobody drives the rig. */
+export function LostNotice({ age, notDriven }: { age: LinkAge; notDriven: string | undefined }) {
   if (age.grade !== 'lost') return null;
   return (
     <View role="alert" className="flex-row items-center gap-3 rounded-panel border-2 border-danger bg-panel p-3" testID="lost-notice">
       <Icon name="offline" tone="danger" />
       <View className="flex-1">
         <Label size={15} tone="text">
-          {age.ageS === null ? 'Not heard yet.' : `Last known ${formatAgo(age.ageS)}.`} {silence[age.silent ?? 'page']}
+          {age.ageS === null ? 'Not heard yet.' : `Last known ${formatAgo(age.ageS)}.`}{' '}
+          {age.silent === 'rig' && notDriven !== undefined ? notDriven : silence[age.silent ?? 'page']}
         </Label>
       </View>
     </View>

@@ -95,7 +95,7 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
     >
       <RunHead view={view} timeZone={timeZone} serverNowMs={serverNowMs} lost={lost} />
       <LockedNotice words={state.beat?.lockedBy ?? null} />
-      <LostNotice age={age} />
+      <LostNotice age={age} notDriven={state.beat?.notDriven} />
       <SlipNotice view={view} timeZone={timeZone} />
       <HeldNotice view={view} timeZone={timeZone} serverNowMs={serverNowMs} />
       <WaitingPanel view={view} timeZone={timeZone} serverNowMs={serverNowMs} />

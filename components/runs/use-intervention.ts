@@ -11,7 +11,7 @@ interface RunAddress {
 
 const routes = { hold: holdRun, 'hold-after-dwell': holdAfterDwell, stop: stopRun } as const;
 /** Answers that say nothing about this act: the server is overloaded, at work on an earlier attempt, or its database is away. */
-const inconclusive: ReadonlySet<string> = new Set(['still-running', 'database-away', 'too-many-requests', 'internal']);
+const inconclusive: ReadonlySet<string> = new Set(['still-running', 'database-away', 'rigs-away', 'too-many-requests', 'internal']);
 
 type Outcome = { kind: 'accepted'; serverAtMs: number } | { kind: 'refused'; detail: string };
 

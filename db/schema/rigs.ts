@@ -77,6 +77,21 @@ export const rigLeases = pgTable(
   ],
 );
 
+/** What a process without rigs asks of one that drives them; a row lives for seconds. */
+export const rigQuestions = pgTable(
+  'rig_questions',
+  {
+    labId: key('lab_id').notNull(),
+    id: key('id').notNull(),
+    question: json('question').$type<unknown>().notNull(),
+    askedAt: instant('asked_at').notNull(),
+    /** Process that has taken it; null while nobody has. */
+    takenBy: text('taken_by'),
+    reply: json('reply').$type<unknown>(),
+  },
+  (table) => [primaryKey({ columns: [table.labId, table.id] })],
+);
+
 /** Somebody on site answers for the rig from `fromAt` until `untilAt`, or until the arm is ended earlier. */
 export const arms = pgTable(
   'arms',

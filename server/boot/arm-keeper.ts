@@ -31,8 +31,12 @@ export class MemoryArmKeeper implements ArmKeeper {
     const arm = await newestArm(this.parts.database.db, rig);
     if (arm === null) return;
     const { id, name, note, fromAt: fromUtcMs, untilAt: untilUtcMs, bootId, endedAt, endedWhy } = arm;
-    if (endedAt === null) this.arms.set(rig.rigId, { id, name, note, fromUtcMs, untilUtcMs, bootId });
-    else this.ended.set(rig.rigId, { name, why: endedWhy ?? '', atUtcMs: endedAt });
+    if (endedAt === null) {
+      this.arms.set(rig.rigId, { id, name, note, fromUtcMs, untilUtcMs, bootId });
+      return;
+    }
+    this.arms.delete(rig.rigId);
+    this.ended.set(rig.rigId, { name, why: endedWhy ?? '', atUtcMs: endedAt });
   }
 
   armOf(rigId: string): StandingArm | null {

@@ -4,6 +4,7 @@ import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { RunJournals } from '../interfaces/run-journal';
 import type { MailPort } from '../interfaces/mail';
 import type { OutgoingPort } from '../interfaces/outgoing';
+import type { ProcessPost } from '../interfaces/process-post';
 import type { PushPort } from '../interfaces/push';
 import type { StationRig } from '../interfaces/rig-stations';
 import type { ServerConfig } from '../interfaces/server-config';
@@ -36,6 +37,8 @@ export interface BuildOverrides {
   journals?: RunJournals;
   /** Free disk, bytes. */
   freeBytes?: () => Promise<number | null>;
+  /** The post of a process that does not play all roles; default: through the database. */
+  post?: ProcessPost;
   /** Whether chores run at their UTC times; they follow the machine's clock, whatever `clock` is. */
   ticks?: boolean;
 }

@@ -1,4 +1,3 @@
-import { randomUUID } from 'node:crypto';
 import { hostname } from 'node:os';
 import { join } from 'node:path';
 import type { Logger } from 'pino';
@@ -30,6 +29,8 @@ const shortestLeaseMs = 3_000;
 const serverName = `process ${String(process.pid)} of ${hostname()}`;
 
 export interface RigSideWiring {
+  /** Of this process: on its leases. */
+  holder: string;
   log: Logger;
   background: Background;
   samples: SampleStore;
@@ -69,7 +70,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
   });
   const leases = new LeaseKeeper({
     ...{ database, clock, log, onTaken },
-    holder: randomUUID(),
+    holder: wiring.holder,
     leaseMs: Math.max(shortestLeaseMs, overrides.paceMs ?? 0),
     graceMs: DATABASE_GRACE_MS,
     onLost: letGo,

@@ -7,7 +7,7 @@ import type { Services } from '../http/services';
 import { heedSchedules } from '../http/work/scheduled-starts';
 import { sendSigns } from '../http/work/signs-of-life';
 import type { Cancel } from '../interfaces/clock';
-import { startTicks } from '../scheduler/ticks';
+import { startTicks, type Chore } from '../scheduler/ticks';
 import { keepHouse } from '../store/housekeeping';
 import { allRigs } from '../store/rigs';
 import { anchorAudit } from './audit-anchor';
@@ -25,8 +25,10 @@ export interface BuiltServer {
   start(): Promise<void>;
   /** Lets go of everything; runs go on as their protocols say when the next server takes them up. The database stays open. */
   stop(): Promise<void>;
-  /** Serves on the host and port of the configuration. Returns the address. */
+  /** Serves on the host and port of the configuration, and to watchers. Returns the address. */
   listen(): Promise<string>;
+  /** Answers whoever watches over the process, where a port for that is configured: all that one without the role `web` serves. */
+  listenToWatchers(): Promise<void>;
 }
 
 /** The whole server out of its parts; nothing runs before `start`. */
@@ -36,6 +38,9 @@ export function buildServer(parts: BuildParts): BuiltServer {
   const server = createServer(app);
   const life = new Life(services, inside, parts);
   const metrics = new MetricsPort(services);
+  const listenToWatchers = async () => {
+    services.config.metricsPort = await metrics.listen(services.config.metricsPort);
+  };
   return {
     app,
     services: Object.assign(services, { idle: () => idle(services, inside) }),
@@ -46,9 +51,10 @@ export function buildServer(parts: BuildParts): BuiltServer {
       await closeServer(server);
     },
     listen: async () => {
-      services.config.metricsPort = await metrics.listen(services.config.metricsPort);
+      await listenToWatchers();
       return listen(server, services);
     },
+    listenToWatchers,
   };
 }
 
@@ -67,24 +73,18 @@ class Life {
   async start(): Promise<void> {
     const { services, inside } = this;
     const { db } = services.database;
-    const { stateDir } = services.config;
+    const { roles } = services.config;
+    await services.post?.open();
     await keepHouse(db, services.clock.utcMs());
-    await inside.takeRigs(await allRigs(db));
-    inside.leases.renewRegularly();
+    if (roles.includes('rig')) {
+      await inside.takeRigs(await allRigs(db));
+      inside.leases.renewRegularly();
+      this.refreshRegularly();
+    }
     inside.tellTakenUp();
-    this.refreshRegularly();
-    inside.crew.start();
-    inside.watch.start();
-    if (this.parts.overrides?.ticks ?? services.config.mode !== 'test')
-      this.ticks = startTicks(
-        [
-          { name: 'heed schedules', cron: '* * * * *', work: () => heedSchedules(services) },
-          { name: 'signs of life', cron: '* * * * *', work: () => sendSigns(services) },
-          { name: 'keep house', cron: '7 * * * *', work: () => keepHouse(db, services.clock.utcMs()) },
-          { name: 'anchor the audit', cron: '11 4 * * *', work: () => anchorAudit(db, { stateDir, nowUtcMs: services.clock.utcMs() }) },
-        ],
-        services.log,
-      );
+    if (roles.includes('worker')) inside.crew.start();
+    if (roles.includes('rig')) inside.watch.start();
+    if (this.parts.overrides?.ticks ?? services.config.mode !== 'test') this.ticks = startTicks(this.chores(), services.log);
   }
 
   async stop(): Promise<void> {
@@ -95,6 +95,7 @@ class Life {
     services.live.close();
     services.lines.close();
     services.guided.closeAll();
+    inside.across.close();
     services.supervisor.close();
     const crewStopped = inside.crew.stop();
     await inside.closeTasks();
@@ -106,6 +107,21 @@ class Life {
     inside.locks.close();
     await inside.background.idle();
     await inside.leases.close();
+    await services.post?.close();
+  }
+
+  /** What is due at its time of day: starts where the rigs are, all else with the jobs. */
+  private chores(): Chore[] {
+    const { services } = this;
+    const { db } = services.database;
+    const { roles, stateDir } = services.config;
+    const ofRigs = [{ name: 'heed schedules', cron: '* * * * *', work: () => heedSchedules(services) }];
+    const ofWorkers = [
+      { name: 'signs of life', cron: '* * * * *', work: () => sendSigns(services) },
+      { name: 'keep house', cron: '7 * * * *', work: () => keepHouse(db, services.clock.utcMs()) },
+      { name: 'anchor the audit', cron: '11 4 * * *', work: () => anchorAudit(db, { stateDir, nowUtcMs: services.clock.utcMs() }) },
+    ];
+    return [...(roles.includes('rig') ? ofRigs : []), ...(roles.includes('worker') ? ofWorkers : [])];
   }
 
   /** Whoever signed in since must be able to hold and stop when the database goes away. */

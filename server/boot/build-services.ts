@@ -17,7 +17,9 @@ import { tellStarter } from '../http/work/tell-starter';
 import { AppendRates } from '../ingest/append-rate';
 import { RecentSamples } from '../ingest/recent-samples';
 import { MailNotSetUp, type MailPort } from '../interfaces/mail';
+import type { ArrivedSamples } from '../interfaces/process-post';
 import type { StationRig } from '../interfaces/rig-stations';
+import type { ServerConfig } from '../interfaces/server-config';
 import { alarmJobs } from '../notify/alarm-jobs';
 import { mailJobs } from '../notify/mail-jobs';
 import { createOutgoing } from '../notify/outgoing';
@@ -29,6 +31,7 @@ import { createJobQueue } from '../store/jobs';
 import { accessSource } from '../store/people';
 import { createSampleStore } from '../store/sample-store';
 import { Background } from './background';
+import { buildAcross, createPost, type Across } from './build-across';
 import type { BuildParts } from './build-parts';
 import { buildRigSide, type RigSide } from './build-rigs';
 import { createLog } from './create-log';
@@ -47,6 +50,7 @@ export interface Inside extends Omit<RigSide, 'supervisor' | 'guided' | 'soak'> 
   /** Unfinished runs are driven from now on. */
   tellTakenUp(): void;
   closeTasks(): Promise<void>;
+  across: Pick<Across, 'close'>;
 }
 
 const noMail: MailPort = { send: () => Promise.reject(new MailNotSetUp()) };
@@ -60,31 +64,37 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   const background = new Background(log);
   let awaySinceUtcMs: number | null = null;
   const nowUtcMs = () => clock.utcMs();
+  const post = createPost(parts, log);
   const samples = createSampleStore(database);
   const recent = new RecentSamples();
   const sessions = createSessions({ db: database.db, clock, newToken, sha256: sha256Hex });
   const { arms, arming, locks, leases, stations, supervisor, guided, apparatus, soak } = buildRigSide(parts, {
-    ...{ log, background, samples },
+    ...{ holder: post?.process ?? randomUUID(), log, background, samples },
     samplesOf: (rigId) => recent.readerOf(rigId),
-    onLine: (rigId) => lines.changed(rigId),
+    onLine: (rigId) => (lines.changed(rigId), told.rigChanged(rigId)),
     onTaken: (rig) => background.add(taking.takenOver(rig), 'taking a rig over'),
     onDatabase: (sinceUtcMs) => watch.noteDatabase((awaySinceUtcMs = sinceUtcMs)),
     onNotice: (start, notice) => tellStarter(services, start, notice),
     onLinkEvent: (station, event, wasArmed) => watch.heard(station, event, wasArmed),
   });
   const { live, lines } = buildHubs(parts, () => services);
+  const { desk, outlook, told, ...across } = buildAcross(config, {
+    ...{ post, clock, log, newId: randomUUID, services: () => services, side: { leases, arms, locks }, live },
+    keep: keeping(config, recent, live),
+    pokeJobs: () => crew.poke(),
+  });
   const access = new AccessDirectory({ source: accessSource(database.db, nowUtcMs), sessions, clock, sha256: sha256Hex });
   const workers = overrides.tasks === undefined ? createWorkerTasks() : null;
   const takenUp = openPromise();
   const services: Services = {
     ...{ clock, log, database, sessions, access, samples, stations, arms, arming, locks, supervisor, guided, soak, live, lines, newToken },
     config: { ...config, limits: { ...config.limits }, devices: { ...config.devices } },
-    ...{ newId: randomUUID, sha256: sha256Hex, arrived: arrival(recent, live) },
+    ...{ newId: randomUUID, sha256: sha256Hex, desk, outlook, post, arrived: told.arrived, runChanged: told.runChanged },
     ...{ reviews: new Reviews({ clock, newToken }), answers: new AnswerCounts() },
     appendRates: new AppendRates(clock, () => services.config.devices),
     idempotency: createIdempotency(database.db, nowUtcMs),
     ...buildTelling(parts, () => services.config.port),
-    activeRuns: new ActiveRuns({ supervisor, live }),
+    activeRuns: new ActiveRuns({ supervisor, onChange: told.runChanged }),
     watchedLabs: () => [...new Set([...services.activeRuns.labIds(), ...guided.labIds()])],
     tasks: overrides.tasks ?? (workers as NonNullable<typeof workers>),
     background: (work, what) => background.add(work, what),
@@ -92,27 +102,33 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     databaseAwaySinceUtcMs: () => awaySinceUtcMs,
     freeBytes: overrides.freeBytes ?? (() => freeBytesAt(config.stateDir)),
     breathe: () => new Promise((resolve) => setImmediate(resolve)),
-    pokeJobs: () => crew.poke(),
+    pokeJobs: () => (crew.poke(), told.jobsQueued()),
   };
   const watch = new AlarmWatch({ services, paceMs: overrides.paceMs, freeDisk: () => freeDisk(config.stateDir) });
   const crew = buildCrew(parts, services);
   const taking = new RigTaking(services, { leases, arms, locks, stations, recent });
-  access.onEnded((ended) => {
-    live.endAccess(ended);
-    lines.endAccess(ended);
-  });
-  stations.onSamples(({ rigId, channel, utcMs, value, ...facts }) =>
-    services.arrived(rigId, { ...facts, name: channel, role: 'deflection' }, { utcMs, value }),
-  );
+  tellOn(services, stations, told);
   return {
     services,
     inside: {
-      ...{ leases, arms, arming, locks, stations, apparatus, crew, background, watch },
+      ...{ leases, arms, arming, locks, stations, apparatus, crew, background, watch, across },
       takeRigs: (rigs) => taking.takeAll(rigs),
       tellTakenUp: takenUp.resolve,
       closeTasks: async () => workers?.close(),
     },
   };
+}
+
+/** What happens here is told to the streams of this process, and to others. */
+function tellOn({ access, live, lines }: Services, stations: RigSide['stations'], told: Across['told']): void {
+  access.onEnded((ended) => {
+    live.endAccess(ended);
+    lines.endAccess(ended);
+    told.accessEnded(ended);
+  });
+  stations.onSamples(({ rigId, channel, utcMs, value, ...facts }) =>
+    told.measured({ rigId, channel: { ...facts, name: channel, role: 'deflection' }, utcMs, value }),
+  );
 }
 
 /** How people and watchers are reached. */
@@ -140,10 +156,11 @@ function buildHubs({ clock, config }: BuildParts, services: () => Services): Pic
 }
 
 /** Where samples go that have just come, besides the database. */
-function arrival(recent: RecentSamples, live: LiveHub): Services['arrived'] {
-  return (rigId, { channelId, name, unit, role, rateHz }, { utcMs, value }) => {
-    recent.add(rigId, { name, unit, role, rateHz }, { utcMs, value });
-    if (role === 'deflection') live.sampled(rigId, { channelId, channel: name, unit, utcMs: [...utcMs], value: [...value] });
+function keeping({ roles }: ServerConfig, recent: RecentSamples, live: LiveHub): (samples: ArrivedSamples) => void {
+  const forRuns = roles.includes('rig');
+  return ({ rigId, channel: { channelId, name, unit, role, rateHz }, utcMs, value }) => {
+    if (forRuns) recent.add(rigId, { name, unit, role, rateHz }, { utcMs: Float64Array.from(utcMs), value: Float64Array.from(value) });
+    if (role === 'deflection') live.sampled(rigId, { channelId, channel: name, unit, utcMs: Array.from(utcMs), value: Array.from(value) });
   };
 }
 

@@ -60,7 +60,7 @@ async function main(): Promise<void> {
   // Where a debugger stands still, a loop does too.
   if (config.mode === 'production') startWatchdog();
 
-  const address = await server.listen();
+  const address = config.roles.includes('web') ? await server.listen() : await server.listenToWatchers().then(() => null);
   process.stdout.write(`${JSON.stringify(greeting(config, address, mailbox))}\n`);
   await server.start().catch((error: unknown) => {
     // What was still being taken up when the end came is let go of.
@@ -80,9 +80,9 @@ async function endAll(ends: readonly (() => unknown)[]): Promise<void> {
 }
 
 /** What the start script reads and shows. */
-function greeting(config: ServerConfig, address: string, mailbox: DemoMailbox | null): object {
-  const signIns = config.demo ? demoPeople.map(({ email, role }) => ({ email, role, password: demoPassword })) : [];
-  return { listening: address, signIns, ...(mailbox === null ? {} : { mailbox: mailbox.folder }) };
+function greeting(config: ServerConfig, address: string | null, mailbox: DemoMailbox | null): object {
+  const signIns = config.demo && address !== null ? demoPeople.map(({ email, role }) => ({ email, role, password: demoPassword })) : [];
+  return { listening: address, roles: config.roles, signIns, ...(mailbox === null ? {} : { mailbox: mailbox.folder }) };
 }
 
 main().catch((error: unknown) => {

@@ -2,7 +2,7 @@ import { createServer, type Server } from 'node:http';
 import { monitorEventLoopDelay } from 'node:perf_hooks';
 import { sql } from 'drizzle-orm';
 import { gauge, metricsText, type Metric } from '../http/metrics';
-import { readinessOf } from '../http/readiness';
+import { readinessOf, type Readiness } from '../http/readiness';
 import type { Services } from '../http/services';
 import { allRigs } from '../store/rigs';
 import { freeDisk } from './free-disk';
@@ -23,12 +23,8 @@ export class MetricsPort {
     if (port === null) return null;
     this.lag.enable();
     const server = createServer((req, res) => {
-      if (req.url !== '/metrics') {
-        res.writeHead(404).end();
-        return;
-      }
-      void this.text().then(
-        (text) => res.writeHead(200, { 'content-type': 'text/plain; version=0.0.4' }).end(text),
+      void this.answer(req.url ?? '').then(
+        ({ status, type, text }) => res.writeHead(status, { 'content-type': type, 'cache-control': 'no-store' }).end(text),
         () => res.writeHead(503).end(),
       );
     });
@@ -50,19 +46,32 @@ export class MetricsPort {
     });
   }
 
+  /** Those without the role `web` have no other place for `/healthz` and `/readyz`. */
+  private async answer(path: string): Promise<{ status: number; type: string; text: string }> {
+    if (path === '/metrics') return { status: 200, type: 'text/plain; version=0.0.4', text: await this.text() };
+    if (path === '/healthz') return { status: 200, type: 'text/plain', text: 'ok\n' };
+    if (path !== '/readyz') return { status: 404, type: 'text/plain', text: '' };
+    const readiness = await readinessOf(this.services);
+    return { status: readiness.ready ? 200 : 503, type: 'application/json', text: JSON.stringify(readiness) };
+  }
+
   private async text(): Promise<string> {
     const { services } = this;
     const readiness = await readinessOf(services);
     const free = await freeDisk(services.config.stateDir);
     return metricsText([
-      gauge('evenfall_database_up', 'Whether the database answers.', Number(readiness.ready)),
+      gauge('evenfall_database_up', 'Whether the database answers.', Number(readiness.database === 'answers')),
+      rolesOf(readiness),
+      ...(readiness.others === 'none'
+        ? []
+        : [gauge('evenfall_post_up', 'Whether other processes of this database are heard.', Number(readiness.others === 'heard'))]),
       gauge('evenfall_event_loop_lag_p99_seconds', 'How late the loop turns, 99th percentile since the last look.', this.lagS()),
       gauge('evenfall_memory_bytes', 'Memory of the process.', process.memoryUsage().rss),
       gauge('evenfall_uptime_seconds', 'Age of the process.', process.uptime()),
       ...(free === null ? [] : [gauge('evenfall_disk_free_ratio', 'Free part of the disk of the state folder.', free)]),
       gauge('evenfall_live_streams', 'Pages that follow a run or a line.', services.live.count() + services.lines.count()),
       ...services.answers.metrics(),
-      ...(readiness.ready ? [...(await this.rigs()), ...(await this.work())] : []),
+      ...(readiness.database === 'answers' ? [...(await this.rigs()), ...(await this.work())] : []),
     ]);
   }
 
@@ -116,3 +125,8 @@ export class MetricsPort {
     ];
   }
 }
+
+const rolesOf = ({ roles }: Readiness): Metric => ({
+  ...{ name: 'evenfall_role', type: 'gauge', help: 'What this process does.' },
+  samples: roles.map((role) => ({ labels: { role }, value: 1 })),
+});

@@ -4,8 +4,8 @@ import type { RunDriver } from '../engine/run-driver';
 import type { RunChange } from '../engine/run-driver-parts';
 import type { RigSupervisor } from '../engine/rig-supervisor';
 import type { RunListRow } from '../store/runs-read';
-import type { LiveHub } from './live/live-hub';
-import { liveSummaryOf, runViewOf } from './run-view';
+import type { LiveChange } from '../interfaces/process-post';
+import { liveSummaryOf, progressOf, runViewOf } from './run-view';
 
 export type ActiveRun = RunListRow & { start: RunStart };
 
@@ -16,7 +16,7 @@ export type ActiveRun = RunListRow & { start: RunStart };
 export class ActiveRuns {
   private readonly byId = new Map<string, ActiveRun>();
 
-  constructor(private readonly parts: { supervisor: RigSupervisor; live: LiveHub }) {
+  constructor(private readonly parts: { supervisor: RigSupervisor; onChange(runId: string, change: LiveChange): void }) {
     parts.supervisor.onChange((driver, change) => this.changed(driver, change));
   }
 
@@ -60,7 +60,7 @@ export class ActiveRuns {
   private changed(driver: RunDriver, change: RunChange): void {
     const run = this.byId.get(driver.runId);
     if (run === undefined) return;
-    this.parts.live.changed(run.id, { events: change.events, steps: change.steps, view: runViewOf(run, change.facts) });
+    this.parts.onChange(run.id, { events: change.events, steps: change.steps, progress: progressOf(runViewOf(run, change.facts)) });
     if (driver.isDone()) this.byId.delete(run.id);
   }
 }

@@ -3,12 +3,12 @@ import type { RouteContract } from '@/shared/contracts/route';
 import { may, roles, type Act } from '@/shared/contracts/roles';
 import type { IdempotencyAnswer, IdempotencyPort } from '../interfaces/idempotency';
 import { checkedResponse } from './check-response';
-import { invalidInput, isDatabaseAway } from './errors';
-import { fieldWords } from './field-words';
+import { parsedBy } from './desk/here-desk';
+import { isDatabaseAway } from './errors';
 import { actOnce, fingerprintOf, idempotencyKeyOf, rethrowKeptProblem } from './idempotent';
 import { linkToNext } from './paging';
 import { notFound, ProblemError } from './problem-error';
-import type { Membership, MountedRoute, RouteContext, SignedIn } from './route-context';
+import type { AtTheRig, Membership, MountedRoute, RouteContext, SignedIn } from './route-context';
 import type { Services } from './services';
 import { clearSessionCookie, readSessionToken, setSessionCookie } from './session-cookie';
 
@@ -27,7 +27,7 @@ export function answerRoute(route: MountedRoute, parts: RouteParts): RequestHand
   const { contract } = route;
   return async (req, res) => {
     const caller = await identify(contract, req, parts.services);
-    const query = parsed('query', contract, req.query);
+    const query = parsedBy(contract, 'query', req.query);
     const body = await readBody(contract, { req, res, readJson: parts.readJson });
     const ifMatch = readIfMatch(contract, req);
     const reply: { etag: string | null } = { etag: null };
@@ -46,6 +46,7 @@ export function answerRoute(route: MountedRoute, parts: RouteParts): RequestHand
       },
     } as unknown as RouteContext;
     const act = async (): Promise<IdempotencyAnswer> => {
+      if (route.atTheRig !== undefined) return askAtTheRig(route, route.atTheRig, context);
       const value = await route.handle(context);
       return {
         status: contract.status,
@@ -61,6 +62,26 @@ export function answerRoute(route: MountedRoute, parts: RouteParts): RequestHand
     rethrowKeptProblem(answer);
     send(res, req, answer);
   };
+}
+
+function askAtTheRig(
+  { contract }: MountedRoute,
+  { which, urgent, elseStored }: AtTheRig,
+  context: RouteContext,
+): Promise<IdempotencyAnswer> {
+  const { req, services, ifMatch } = context;
+  const [me, membership] = [context.me as SignedIn | null, context.membership as Membership | null];
+  const question = {
+    route: contract.name,
+    params: context.params as Record<string, string>,
+    query: req.query,
+    body: (req.body ?? {}) as unknown,
+    ifMatch,
+    me: me === null ? null : { userId: me.userId, name: me.name, email: me.email },
+    membership,
+  };
+  if (which === 'each') return services.desk.askEach(question, membership?.labId ?? '');
+  return services.desk.ask({ question, which: () => which(context), urgent, elseStored });
 }
 
 function once(
@@ -142,14 +163,6 @@ function assertMay(membership: Membership, act: Act, services: Services): void {
   throw new ProblemError('not-allowed', `Your role in ${membership.labName} is ${membership.role}; this needs ${who.join(' or ')}.`);
 }
 
-function parsed(where: 'query' | 'body', contract: RouteContract, value: unknown): unknown {
-  const schema = contract[where];
-  if (schema === undefined) return undefined;
-  const result = schema.safeParse(value, { error: fieldWords });
-  if (!result.success) throw invalidInput(where, result.error);
-  return result.data;
-}
-
 const hasBody = (req: Request) => req.headers['transfer-encoding'] !== undefined || Number(req.headers['content-length'] ?? 0) > 0;
 
 async function readBody(
@@ -167,7 +180,7 @@ async function readBody(
     return undefined;
   }
   if (contract.body === undefined) return undefined;
-  if (!hasBody(req)) return parsed('body', contract, {});
+  if (!hasBody(req)) return parsedBy(contract, 'body', {});
   if (req.is('application/json') === false)
     throw new ProblemError(
       'wrong-content-type',
@@ -179,7 +192,7 @@ async function readBody(
       else reject(error as Error);
     });
   });
-  return parsed('body', contract, req.body ?? {});
+  return parsedBy(contract, 'body', req.body ?? {});
 }
 
 function readIfMatch(contract: RouteContract, req: Request): string | null {

@@ -65,7 +65,7 @@ const noStore: RequestHandler = (_req, res, next) => {
 
 function answerProblems(services: Services): ErrorRequestHandler {
   const answer = (...[error, req, res]: Parameters<ErrorRequestHandler>): void => {
-    const problem = problemErrorOf(error, services.databaseAwaySinceUtcMs());
+    const problem = problemErrorOf(error, services.databaseAwaySinceUtcMs(), services.config.roles.includes('rig'));
     if (problemCodes[problem.code] >= 500) services.log.error({ err: error as Error, requestId: requestIdOf(res) }, 'a request failed');
     if (res.headersSent) {
       res.destroy();

@@ -79,8 +79,16 @@ export const isDatabaseAway = (error: unknown): boolean => isSomewhere(error, sa
 
 const awaySince = (utcMs: number | null) => (utcMs === null ? 'at the moment' : `since ${new Date(utcMs).toISOString().slice(11, 19)} UTC`);
 
-/** Every failure as a problem; what nobody foresaw becomes `internal` and tells nothing of the inside. */
-export function problemErrorOf(error: unknown, databaseAwaySinceUtcMs: number | null = null): ProblemError {
+const haltWords = (haltsAnyway: boolean) =>
+  haltsAnyway
+    ? 'hold and stop still work.'
+    : 'hold and stop reach the rigs only through the database: use the switch at the rig if anything must stand still.';
+
+/**
+ * Every failure as a problem; what nobody foresaw becomes `internal` and tells nothing of the inside.
+ * @param haltsAnyway whether hold and stop work here without the database
+ */
+export function problemErrorOf(error: unknown, databaseAwaySinceUtcMs: number | null = null, haltsAnyway = true): ProblemError {
   if (error instanceof ProblemError) return error;
   if (error instanceof NotYetError) return new ProblemError('not-yet', error.message);
   if (isErrorLike(error)) {
@@ -94,7 +102,7 @@ export function problemErrorOf(error: unknown, databaseAwaySinceUtcMs: number | 
     if (isSomewhere(error, saysAway))
       return new ProblemError(
         'database-away',
-        `The database does not answer ${awaySince(databaseAwaySinceUtcMs)}. Nothing was changed; hold and stop still work. Try again in a few seconds.`,
+        `The database does not answer ${awaySince(databaseAwaySinceUtcMs)}. Nothing was changed; ${haltWords(haltsAnyway)} Try again in a few seconds.`,
       ).after(awayRetryS);
     if (error.status === 400) return new ProblemError('invalid-input', 'The address or the body of the request could not be read.');
     if (error.status === 404) return new ProblemError('not-found', 'There is nothing at this address.');

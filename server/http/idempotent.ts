@@ -58,7 +58,8 @@ export async function actOnce(
   }
 }
 
-const isDecided = (error: ProblemError) => !['internal', 'database-away', 'too-many-requests', 'still-running'].includes(error.code);
+const isDecided = (error: ProblemError) =>
+  !['internal', 'database-away', 'rigs-away', 'too-many-requests', 'still-running'].includes(error.code);
 
 /** A kept problem, thrown again for a repeat. */
 export function rethrowKeptProblem(answer: IdempotencyAnswer): void {

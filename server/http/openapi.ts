@@ -164,6 +164,7 @@ function responsesOf(contract: RouteContract, components: Components): Json {
 /** Problems of the route itself and those the edge may answer on it. */
 function everyProblemOf(contract: RouteContract): Set<keyof typeof problemCodes> {
   const edge: (keyof typeof problemCodes)[] = ['too-many-requests', 'internal', 'database-away'];
+  if (/\/(rigs|runs|doors|serial-ports)\b/.test(contract.path)) edge.push('rigs-away');
   if (contract.access === 'signed-in' || contract.access in acts) edge.push('not-signed-in', 'session-expired');
   if (contract.access in acts) edge.push('not-allowed', 'not-found');
   if (contract.method !== 'GET' && contract.access !== 'device') edge.push('cross-site');

@@ -59,6 +59,7 @@ export const problemTitles: Record<ProblemCode, string> = {
   'too-many-requests': 'Too many requests',
   internal: 'Something went wrong here',
   'database-away': 'The database does not answer',
+  'rigs-away': 'Nobody who drives the rig answers',
 };
 
 /** The RFC 9457 document of a failure. */

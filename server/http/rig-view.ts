@@ -25,11 +25,11 @@ export const knowsRevision = (tag: string | null, rig: RigRecord): boolean => ta
 export const knowsLink = (services: Services, tag: string | null, rig: RigRecord): boolean => tag?.split('-')[1] === linkTag(services, rig);
 
 /** The live state of a rig's line and turntable; what the line has not told is null. */
-function rigLiveOf(station: RigStation | null): RigLive {
+function rigLiveOf(station: RigStation | null, drivesRigs: boolean): RigLive {
   if (station === null)
     return {
       condition: 'closed',
-      detail: 'this server does not drive the rig',
+      detail: drivesRigs ? 'this server does not drive the rig' : 'no process drives the rig at the moment',
       lastReplyAt: null,
       roundTripMs: null,
       discardedLines: 0,
@@ -109,7 +109,7 @@ export function rigSummaryOf(services: Services, rig: RigRecord, run: RunListRow
     name: rig.name,
     revision: rig.revision,
     link: rig.link,
-    live: rigLiveOf(services.stations.get(rig.id)),
+    live: rigLiveOf(services.stations.get(rig.id), services.config.roles.includes('rig')),
     ...standingOf(services, rig.id),
     activeRun:
       run === undefined

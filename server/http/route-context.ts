@@ -3,6 +3,7 @@ import type * as z from 'zod';
 import type { Role } from '@/shared/contracts/roles';
 import type { ParamsOf, ResponseOf, RouteContract } from '@/shared/contracts/route';
 import type { Session } from '../interfaces/sessions';
+import type { WhichRig } from './desk/rig-desk';
 import type { Services } from './services';
 
 /** Who is signed in. */
@@ -47,9 +48,18 @@ export interface RouteContext<R extends RouteContract = RouteContract> {
 
 export type RouteHandler<R extends RouteContract> = (context: RouteContext<R>) => Promise<ResponseOf<R>> | ResponseOf<R>;
 
+/** A route that only the process can answer that drives the rig. */
+export interface AtTheRig {
+  /** `each`: a list of rigs, to which every process has its part. */
+  which: ((context: RouteContext) => Promise<WhichRig>) | 'each';
+  urgent: boolean;
+  elseStored: boolean;
+}
+
 export interface MountedRoute {
   readonly contract: RouteContract;
   readonly handle: (context: RouteContext) => Promise<unknown>;
+  readonly atTheRig?: AtTheRig;
 }
 
 /** Joins a contract and the function that answers it; `createApp` puts the pairs under `/api`. */

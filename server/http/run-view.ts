@@ -1,5 +1,5 @@
 import type { RunStart } from '@/shared/archive/run-records';
-import type { RunSummary, RunView } from '@/shared/contracts/runs';
+import type { LiveMessages, RunSummary, RunView } from '@/shared/contracts/runs';
 import type { WaitingView } from '@/shared/contracts/waiting';
 import { factsOf, plannedDwells, type RunFacts, type WaitingFacts } from '../engine/run-facts';
 import { restored } from '../engine/stored-snapshot';
@@ -84,6 +84,18 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
     protocol: start.protocol,
     simulated:
       start.simulated === null ? null : { trueG: start.simulated.trueG, seed: start.simulated.seed, rateHz: start.simulated.rateHz },
+  };
+}
+
+/** Rig and protocol went out with the first snapshot: with every change they would be nine tenths of all that is sent. */
+export function progressOf(view: RunView): LiveMessages['progress'] {
+  const { state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt } = view;
+  const { dwellsGood, waiting, reversal } = view;
+  const { dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq } = view;
+  return {
+    ...{ state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt },
+    ...{ dwellsGood, waiting, reversal },
+    ...{ dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq },
   };
 }
 

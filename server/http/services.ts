@@ -10,6 +10,7 @@ import type { IdempotencyPort } from '../interfaces/idempotency';
 import type { LockKeeper } from '../interfaces/lock-keeper';
 import type { MailPort } from '../interfaces/mail';
 import type { OutgoingPort } from '../interfaces/outgoing';
+import type { LiveChange, ProcessPost } from '../interfaces/process-post';
 import type { PushPort } from '../interfaces/push';
 import type { TellParts } from '../notify/tell';
 import type { RigStations } from '../interfaces/rig-stations';
@@ -21,6 +22,8 @@ import type { SessionPort } from '../interfaces/sessions';
 import type { Connection } from '../store/database';
 import type { AccessDirectory } from './access-directory';
 import type { ActiveRuns } from './active-runs';
+import type { RigDesk } from './desk/rig-desk';
+import type { RigOutlook } from './desk/rig-outlook';
 import type { LineHub } from './live/line-hub';
 import type { LiveHub } from './live/live-hub';
 import type { AnswerCounts } from './metrics';
@@ -60,6 +63,14 @@ export interface Services {
   guided: GuidedMoves;
   soak: MotorSoak;
   activeRuns: ActiveRuns;
+  /** Where is asked what only the process can answer that drives the rig. */
+  desk: RigDesk;
+  /** What the live streams tell of rigs. */
+  outlook: RigOutlook;
+  /** The other processes of this database; null where one plays all roles. */
+  post: ProcessPost | null;
+  /** A run changed: all who follow it are told, in this process and in others. */
+  runChanged(runId: string, change: LiveChange): void;
   reviews: Reviews;
   live: LiveHub;
   lines: LineHub;

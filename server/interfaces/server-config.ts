@@ -1,7 +1,13 @@
+/** What a process does: `web` answers pages and programs, `rig` drives rigs, `worker` does jobs and chores. */
+export const processRoles = ['web', 'rig', 'worker'] as const;
+export type ProcessRole = (typeof processRoles)[number];
+
 /** Everything the environment decides, read once by `server/boot/config.ts`. */
 export interface ServerConfig {
   /** `production` strips what a contract does not name from an answer; elsewhere such an answer is an error. */
   mode: 'production' | 'development' | 'test';
+  /** All of them in one process by default. */
+  roles: readonly ProcessRole[];
   databaseUrl: string;
   host: string;
   /** 0: any free port. */

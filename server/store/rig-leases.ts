@@ -1,4 +1,4 @@
-import { and, eq, inArray, lte, or, sql } from 'drizzle-orm';
+import { and, eq, gt, inArray, lte, or, sql } from 'drizzle-orm';
 import { rigLeases } from '@/db/schema';
 import type { Handle } from './database';
 
@@ -58,6 +58,12 @@ export async function freeRigs(db: Handle, rigIds: readonly string[], nowUtcMs: 
     .select({ rigId: rigLeases.rigId })
     .from(rigLeases)
     .where(and(inArray(rigLeases.rigId, [...rigIds]), lte(rigLeases.untilAt, nowUtcMs)));
+  return new Set(rows.map(({ rigId }) => rigId));
+}
+
+/** Rigs that some process drives now. */
+export async function drivenRigs(db: Handle, nowUtcMs: number): Promise<ReadonlySet<string>> {
+  const rows = await db.select({ rigId: rigLeases.rigId }).from(rigLeases).where(gt(rigLeases.untilAt, nowUtcMs));
   return new Set(rows.map(({ rigId }) => rigId));
 }
 

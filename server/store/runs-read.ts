@@ -225,6 +225,18 @@ export async function sampleFlow(
 }
 
 /** Runs on rigs, of all labs, that have not ended. */
+/** The rig of a run that goes on; null where there is none, it is over, or it is a rehearsal. */
+export async function rigOfRun(
+  db: Handle,
+  { labId, runId }: { labId: string; runId: string },
+): Promise<{ labId: string; rigId: string } | null> {
+  const [row] = await db
+    .select({ labId: runs.labId, rigId: runs.rigId })
+    .from(runs)
+    .where(and(eq(runs.labId, labId), eq(runs.id, runId), eq(runs.rehearsal, false), notInArray(runs.state, endedStates)));
+  return row ?? null;
+}
+
 export const unfinishedRuns = (db: Handle): Promise<RunRecord[]> =>
   db
     .select()

@@ -31,6 +31,7 @@ export const problemCodes = {
   'too-many-requests': 429,
   internal: 500,
   'database-away': 503,
+  'rigs-away': 503,
 } as const;
 
 export type ProblemCode = keyof typeof problemCodes;

@@ -106,6 +106,8 @@ export const liveMessageSchemas = {
     angleDeg: z.number().nullable(),
     /** In a sentence, whose personal locks are on the rig; null while there are none. */
     lockedBy: z.string().nullable(),
+    /** In a sentence, that nobody drives the rig at the moment; absent while somebody does. */
+    notDriven: z.string().optional(),
   }),
 } as const;
 export type LiveMessages = { [K in keyof typeof liveMessageSchemas]: z.infer<(typeof liveMessageSchemas)[K]> };

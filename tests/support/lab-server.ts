@@ -31,6 +31,7 @@ export interface LabServerOptions {
 
 export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig> = {}): ServerConfig => ({
   mode: 'test',
+  roles: ['web', 'rig', 'worker'],
   databaseUrl: database.url,
   host: '127.0.0.1',
   port: 0,

@@ -2,6 +2,7 @@ import type { Response } from 'express';
 import type { ChainedEvent, StepRow } from '@/shared/archive/run-records';
 import type { LiveMessages, RunView } from '@/shared/contracts/runs';
 import type { Clock } from '@/server/interfaces/clock';
+import type { LiveChange } from '@/server/interfaces/process-post';
 import type { SignedIn } from '../route-context';
 import { encodeEvent } from './event-stream';
 import { type Reader, Readers } from './readers';
@@ -11,13 +12,6 @@ export interface LiveRunKey {
   labId: string;
   runId: string;
   rigId: string;
-}
-
-/** What a saved transition of a run changed. */
-export interface LiveChange {
-  events: readonly ChainedEvent[];
-  steps: readonly StepRow[];
-  view: RunView;
 }
 
 export type LiveSamples = LiveMessages['samples'];
@@ -111,6 +105,13 @@ export class LiveHub {
     this.readers.endAccess(ended);
   }
 
+  /** Changes may have been missed: every page comes back and is filled from the database. */
+  reopen(): void {
+    this.recent.clear();
+    this.snapshots.clear();
+    this.readers.close();
+  }
+
   close(): void {
     this.readers.close();
   }
@@ -185,38 +186,26 @@ export class LiveHub {
 }
 
 function sendChange(reader: RunReader, change: LiveChange, whole = () => Buffer.from(encodeChange(change))): void {
-  const { events, steps, view } = change;
+  const { events, steps, progress } = change;
   const fresh = events.filter(({ seq }) => seq > reader.sentSeq);
   reader.sentSeq = Math.max(reader.sentSeq, ...fresh.map(({ seq }) => seq));
-  const snapshotIsNews = view.lastSeq >= reader.sentSeq;
-  if (fresh.length === events.length && snapshotIsNews) reader.stream.send(whole());
-  else reader.stream.send(encodeChange({ events: fresh, steps, view: snapshotIsNews ? view : null }));
+  const progressIsNews = progress.lastSeq >= reader.sentSeq;
+  if (fresh.length === events.length && progressIsNews) reader.stream.send(whole());
+  else reader.stream.send(encodeChange({ events: fresh, steps, progress: progressIsNews ? progress : null }));
 }
 
 /** What came while the page was away. */
-function sendGap(reader: RunReader, { events, steps }: Omit<LiveChange, 'view'>): void {
-  reader.stream.send(encodeChange({ events, steps, view: null }));
+function sendGap(reader: RunReader, { events, steps }: Omit<LiveChange, 'progress'>): void {
+  reader.stream.send(encodeChange({ events, steps, progress: null }));
   reader.sentSeq = events.at(-1)?.seq ?? reader.sentSeq;
 }
 
-function encodeChange({ events, steps, view }: Omit<LiveChange, 'view'> & { view: RunView | null }): string {
+function encodeChange({ events, steps, progress }: Omit<LiveChange, 'progress'> & { progress: LiveChange['progress'] | null }): string {
   return [
     ...events.map((event) => encodeEvent('event', event, event.seq)),
     ...steps.map((step) => encodeEvent('step', step, null)),
-    view === null ? '' : encodeEvent('progress', progressOf(view), view.lastSeq),
+    progress === null ? '' : encodeEvent('progress', progress, progress.lastSeq),
   ].join('');
-}
-
-/** Rig and protocol went out with the first snapshot: with every change they would be nine tenths of all that is sent. */
-function progressOf(view: RunView): LiveMessages['progress'] {
-  const { state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt } = view;
-  const { dwellsGood, waiting, reversal } = view;
-  const { dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq } = view;
-  return {
-    ...{ state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt },
-    ...{ dwellsGood, waiting, reversal },
-    ...{ dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq },
-  };
 }
 
 /** The first call makes the value, later ones give it again. */

@@ -1,4 +1,4 @@
-import type { LiveChange } from './live-hub';
+import type { LiveChange } from '@/server/interfaces/process-post';
 
 /** Changes of each run that are kept; older ones are in the database. */
 const mostKept = 200;
@@ -8,13 +8,17 @@ export class RecentChanges {
   private readonly byRun = new Map<string, LiveChange[]>();
 
   add(runId: string, change: LiveChange): void {
-    if (change.view.endedAt !== null) {
+    if (change.progress.endedAt !== null) {
       this.byRun.delete(runId);
       return;
     }
     const before = this.byRun.get(runId) ?? [];
-    const last = before.at(-1)?.view.lastSeq;
+    const last = before.at(-1)?.progress.lastSeq;
     this.byRun.set(runId, last === lastSeqBefore(change) ? [...before, change].slice(-mostKept) : [change]);
+  }
+
+  clear(): void {
+    this.byRun.clear();
   }
 
   /** What came after an event up to another one; null where not all of it is kept. */
@@ -22,11 +26,11 @@ export class RecentChanges {
     const kept = this.byRun.get(runId) ?? [];
     const [first] = kept;
     const last = kept.at(-1);
-    if (first === undefined || last === undefined || lastSeqBefore(first) > afterSeq || last.view.lastSeq < lastSeq) return null;
+    if (first === undefined || last === undefined || lastSeqBefore(first) > afterSeq || last.progress.lastSeq < lastSeq) return null;
     return kept
-      .filter(({ view }) => view.lastSeq >= afterSeq)
+      .filter(({ progress }) => progress.lastSeq >= afterSeq)
       .map((change) => ({ ...change, events: change.events.filter(({ seq }) => seq > afterSeq) }));
   }
 }
 
-const lastSeqBefore = ({ events, view }: LiveChange) => view.lastSeq - events.length;
+const lastSeqBefore = ({ events, progress }: LiveChange) => progress.lastSeq - events.length;

@@ -6,6 +6,7 @@ import type { PersonalLock } from '@/server/interfaces/lock-keeper';
 import { insertLock, liftLock, signaturesOf, signCautions, type LockRow } from '@/server/store/locks';
 import { findRig, type RigRecord } from '@/server/store/rigs';
 import { audited } from '../audited';
+import { atTheRig, rigOfAddress } from '../desk/at-the-rig';
 import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { armingViewOf, lockViewOf, signatureViewOf } from '../rig-view';
@@ -109,7 +110,9 @@ const armRoutes = [
     else virtual.setDoor(body.door === 'closed');
     return undefined;
   }),
+];
 
+const signRoutes = [
   mount(contracts.signCautions, async (context) => {
     const { body, params, me, services } = context;
     const rig = await load(context, params.rigId);
@@ -156,7 +159,7 @@ async function lift(context: LockCaller, why: string | null): Promise<void> {
   services.locks.lifted(rig.id, params.lockId);
 }
 
-const lockRoutes = [
+const setLockRoutes = [
   mount(contracts.setLock, async (context) => {
     const { body, params, me, services } = context;
     const { labId } = context.membership;
@@ -165,7 +168,9 @@ const lockRoutes = [
     const setUtcMs = services.clock.utcMs();
     return lockViewOf(services.locks.set({ labId, rigId, userId: me.userId, name: me.name, note: body.note, setUtcMs }));
   }),
+];
 
+const liftRoutes = [
   mount(contracts.liftLock, async (context) => {
     await load(context, context.params.rigId);
     const { userId, name } = lockOf(context);
@@ -184,4 +189,8 @@ const lockRoutes = [
   }),
 ];
 
-export const armingRoutes = [...armRoutes, ...lockRoutes];
+export const armingRoutes = [
+  ...signRoutes,
+  ...atTheRig(rigOfAddress, [...armRoutes, ...liftRoutes]),
+  ...atTheRig(rigOfAddress, setLockRoutes, { urgent: true }),
+];

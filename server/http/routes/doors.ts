@@ -6,11 +6,12 @@ import * as store from '@/server/store/doors';
 import { findRig } from '@/server/store/rigs';
 import { activeRuns } from '@/server/store/runs-read';
 import { audited } from '../audited';
+import { atTheRig } from '../desk/at-the-rig';
 import { calendarOf } from '../calendar';
 import { isoOf, isoOrNull } from '../maker';
 import { originForLinks } from '../origin';
 import { notFound } from '../problem-error';
-import { mount } from '../route-context';
+import { mount, type RouteContext } from '../route-context';
 import type { Services } from '../services';
 
 const weekMs = 7 * 86_400_000;
@@ -48,7 +49,7 @@ async function cardOf(services: Services, door: store.DoorAtAddress): Promise<Do
   };
 }
 
-export const doorRoutes = [
+const deedRoutes = [
   mount(contracts.readDoor, async ({ params, membership, services }) => {
     const rig = { labId: membership.labId, rigId: params.rigId };
     await assertRig(services, rig);
@@ -74,10 +75,17 @@ export const doorRoutes = [
     await audited(context, { kind: 'door-card.ended', data: () => ({ rigId: rig.rigId }) }, (tx) => store.deleteDoor(tx, rig));
     return undefined;
   }),
+];
 
+const cardRoutes = [
   mount(contracts.doorCard, async ({ params, services }) => {
     const door = await store.doorAt(services.database.db, services.sha256(params.token));
     if (door === null) throw notFound('door card');
     return cardOf(services, door);
   }),
 ];
+
+const rigOfCard = async ({ params, services }: RouteContext) =>
+  store.doorAt(services.database.db, services.sha256((params as { token?: string }).token ?? ''));
+
+export const doorRoutes = [...deedRoutes, ...atTheRig(rigOfCard, cardRoutes, { urgent: true, elseStored: true })];

@@ -13,6 +13,7 @@ import { findMassSet, findRig } from '@/server/store/rigs';
 import * as store from '@/server/store/runs-read';
 import { auditLater } from '../audited';
 import { assertFreshTap, type Caller } from '../begin-run';
+import { atTheRig, rigOfAddress, rigOfItsRun } from '../desk/at-the-rig';
 import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
@@ -62,7 +63,7 @@ async function accepted({ clock }: Services, runId: string, answer: Answer): Pro
   return { runId, serverAt: isoOf(answer.serverAtUtcMs) };
 }
 
-const reviewRoutes = [
+const startReviewRoutes = [
   mount(reviewContracts.reviewStart, async ({ params, body, me, membership, services }) => {
     const { db } = services.database;
     const rig = await findRig(db, membership.labId, params.rigId);
@@ -73,7 +74,9 @@ const reviewRoutes = [
     const { token, expiresUtcMs } = services.reviews.issue({ userId: me.userId, rigId: rig.id, subject: startSubject(body) });
     return { token, expiresAt: isoOf(expiresUtcMs), serverAt: isoOf(services.clock.utcMs()) };
   }),
+];
 
+const reviewRoutes = [
   mount(reviewContracts.reviewResume, async ({ params, me, membership, services }) => {
     const driver = await driverOf(services, membership.labId, params.runId);
     const found = services.activeRuns.find(membership.labId, params.runId);
@@ -121,7 +124,7 @@ function moveWords(step: LeafStep, { stations }: RigDocument): string {
   return station === undefined ? `swing to ${step.to}` : `swing to ${step.to} (${formatDegrees(station.value)})`;
 }
 
-const actRoutes = [
+const haltRoutes = [
   mount(contracts.holdRun, async (context) => {
     const { params, me, membership, services } = context;
     const answer = (await driverOf(services, membership.labId, params.runId)).hold(me.name);
@@ -136,6 +139,21 @@ const actRoutes = [
     return accepted(services, params.runId, answer);
   }),
 
+  mount(contracts.stopRun, async (context) => {
+    const { params, me, membership, services } = context;
+    const found = services.activeRuns.find(membership.labId, params.runId);
+    if (found === null) {
+      const run = await loadRun(services, membership.labId, params.runId);
+      if (run.state === 'stopped') return { runId: run.id, serverAt: isoOf(services.clock.utcMs()) };
+      if (services.supervisor.quarantinedOf(run.rigId)?.start.runId === run.id) return endQuarantined(context, run);
+    }
+    const answer = (await driverOf(services, membership.labId, params.runId)).stop(me.name);
+    auditLater(context, 'run.stop-asked', { runId: params.runId });
+    return accepted(services, params.runId, answer);
+  }),
+];
+
+const actRoutes = [
   mount(goingOn.withdrawHold, async (context) => {
     const { params, body, me, membership, services } = context;
     const driver = await driverOf(services, membership.labId, params.runId);
@@ -179,19 +197,6 @@ const actRoutes = [
     auditLater(context, 'run.prompt-confirmed', { runId: params.runId });
     return accepted(services, params.runId, answer);
   }),
-
-  mount(contracts.stopRun, async (context) => {
-    const { params, me, membership, services } = context;
-    const found = services.activeRuns.find(membership.labId, params.runId);
-    if (found === null) {
-      const run = await loadRun(services, membership.labId, params.runId);
-      if (run.state === 'stopped') return { runId: run.id, serverAt: isoOf(services.clock.utcMs()) };
-      if (services.supervisor.quarantinedOf(run.rigId)?.start.runId === run.id) return endQuarantined(context, run);
-    }
-    const answer = (await driverOf(services, membership.labId, params.runId)).stop(me.name);
-    auditLater(context, 'run.stop-asked', { runId: params.runId });
-    return accepted(services, params.runId, answer);
-  }),
 ];
 
 const rigOf = ({ services, membership }: Caller, runId: string): string =>
@@ -216,4 +221,8 @@ async function endQuarantined(caller: Caller, run: store.RunRecord): Promise<{ r
   return { runId: run.id, serverAt: isoOf(nowUtcMs) };
 }
 
-export const interventionRoutes = [...reviewRoutes, ...actRoutes];
+export const interventionRoutes = [
+  ...atTheRig(rigOfAddress, startReviewRoutes),
+  ...atTheRig(rigOfItsRun, [...reviewRoutes, ...actRoutes]),
+  ...atTheRig(rigOfItsRun, haltRoutes, { urgent: true }),
+];

@@ -6,6 +6,7 @@ import type { ControllerLimits } from '@/server/interfaces/turntable-link';
 import { findRig, listRigs, type RigRecord } from '@/server/store/rigs';
 import { auditLater, audited } from '../audited';
 import { assertFreshTap } from '../begin-run';
+import { anyRig, atTheRig, rigOfAddress } from '../desk/at-the-rig';
 import { guidedViewOf, limitsViewOf } from '../line-view';
 import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
@@ -66,11 +67,15 @@ async function give(context: OrderContext, body: { guidedId: string; tappedAt?: 
   );
 }
 
-const guidedRoutes = [
+const streamRoutes = [
   mount(contracts.liveLine, async ({ params, membership, me, services, res }) => {
     const { labId } = membership;
-    if (services.stations.get(params.rigId)?.labId !== labId) {
+    const place = { labId, rigId: params.rigId };
+    if (services.outlook.line(place) === null) {
       await load({ membership, services }, params.rigId);
+      await services.outlook.follow(place);
+    }
+    if (services.outlook.line(place) === null) {
       throw new ProblemError(
         'not-found',
         'This server has no line to that rig: its document has no motion data, or another server drives it.',
@@ -79,13 +84,17 @@ const guidedRoutes = [
     services.lines.open(res, { labId, rigId: params.rigId, me });
     return undefined;
   }),
+];
 
+const portRoutes = [
   mount(contracts.listSerialPorts, async ({ membership, services }) => {
     const [ports, rigs] = await Promise.all([services.stations.listPorts(), listRigs(services.database.db, membership.labId)]);
     const userOf = (names: (string | null)[]) => rigs.find(({ link }) => link.kind === 'serial' && names.includes(link.path))?.name ?? null;
     return { items: ports.map((port) => ({ ...port, usedBy: userOf([port.path, port.stablePath]) })) };
   }),
+];
 
+const guidedRoutes = [
   mount(contracts.beginGuided, async (context) => {
     const { me, services } = context;
     const record = await load(context, context.params.rigId);
@@ -108,14 +117,18 @@ const guidedRoutes = [
     auditLater(context, 'rig.guided-ended', { rigId: rig.id, guidedId: body.guidedId });
     return undefined;
   }),
+];
 
+const stayRoutes = [
   mount(contracts.stayGuided, async (context) => {
     const { params, body, membership, services } = context;
     if (services.stations.get(params.rigId)?.labId !== membership.labId) await load(context, params.rigId);
     engine(() => services.guided.seen(asked(context, body.guidedId), body.beat));
     return undefined;
   }),
+];
 
+const orderRoutes = [
   mount(contracts.nudge, (context) => {
     const { steps, intoKeepOut } = context.body;
     return give(context, context.body, { kind: 'nudge', steps, intoKeepOut });
@@ -207,4 +220,9 @@ const takeOverRoutes = [
   }),
 ];
 
-export const lineRoutes = [...takeOverRoutes, ...guidedRoutes, ...teachRoutes, ...haltRoutes];
+export const lineRoutes = [
+  ...streamRoutes,
+  ...atTheRig(anyRig, portRoutes, { urgent: true }),
+  ...atTheRig(rigOfAddress, [...takeOverRoutes, ...guidedRoutes, ...orderRoutes, ...teachRoutes]),
+  ...atTheRig(rigOfAddress, [...stayRoutes, ...haltRoutes], { urgent: true }),
+];

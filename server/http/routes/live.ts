@@ -13,6 +13,8 @@ export const liveRoutes = [
       services.activeRuns.find(membership.labId, params.runId)?.run ??
       (await findRun(services.database.db, membership.labId, params.runId));
     if (run === null) throw notFound('run');
+    // Where nobody drives its rig the page is told so, and shows what is stored.
+    if (run.endedAt === null && !run.rehearsal) await services.outlook.follow(run).catch(() => undefined);
     await services.live.open(res, {
       run: { labId: run.labId, runId: run.id, rigId: run.rigId },
       me,

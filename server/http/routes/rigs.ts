@@ -2,6 +2,7 @@ import * as contracts from '@/shared/contracts/rigs';
 import * as store from '@/server/store/rigs';
 import { activeRuns } from '@/server/store/runs-read';
 import { audited } from '../audited';
+import { anyRig, atTheRig, rigOfAddress } from '../desk/at-the-rig';
 import { isoOf, makerOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { knowsLink, knowsRevision, rigSummaryOf, rigTag, rigViewOf } from '../rig-view';
@@ -32,13 +33,15 @@ async function assertUntouched(services: Services, rig: store.RigRecord): Promis
   if (guidedBy !== null) throw new ProblemError('rig-busy', guidedBy);
 }
 
-const rigRouteList = [
+const listRoutes = [
   mount(contracts.listRigs, async ({ membership, services }) => {
     const { db } = services.database;
     const [rigs, runs] = [await store.listRigs(db, membership.labId), await activeRuns(db, membership.labId)];
     return { items: rigs.map((rig) => rigSummaryOf(services, rig, runs.get(rig.id))) };
   }),
+];
 
+const makeRoutes = [
   mount(contracts.createRig, async (context) => {
     const { body, membership, services } = context;
     const entry = { kind: 'rig.added', data: (rigId: string) => ({ rigId, name: body.name }) };
@@ -49,13 +52,17 @@ const rigRouteList = [
     await services.stations.put(rig);
     return rigViewOf(services, rig);
   }),
+];
 
+const readRoutes = [
   mount(contracts.getRig, async (context) => {
     const rig = await load(context, context.params.rigId);
     context.setEtag(rigTag(context.services, rig));
     return rigViewOf(context.services, rig);
   }),
+];
 
+const reviseRoutes = [
   mount(contracts.reviseRig, async (context) => {
     const { body, membership, params, services, ifMatch } = context;
     const before = await load(context, params.rigId);
@@ -81,7 +88,9 @@ const rigRouteList = [
     context.setEtag(rigTag(context.services, rig));
     return rigViewOf(services, rig);
   }),
+];
 
+const revisionRoutes = [
   mount(contracts.listRigRevisions, async (context) => {
     const rig = await load(context, context.params.rigId);
     const revisions = await store.listRigRevisions(context.services.database.db, rig.labId, rig.id);
@@ -130,7 +139,7 @@ const linkRoutes = [
   }),
 ];
 
-const planRoutes = [
+const massSetRoutes = [
   mount(contracts.addMassSet, async (context) => {
     const { body, params, services } = context;
     const rig = await load(context, params.rigId);
@@ -144,7 +153,9 @@ const planRoutes = [
       return massSet;
     });
   }),
+];
 
+const checkRoutes = [
   mount(contracts.startChecks, async (context) => {
     const { query, params, me, membership, services } = context;
     const rig = await load(context, params.rigId);
@@ -167,4 +178,12 @@ const planRoutes = [
   }),
 ];
 
-export const rigRoutes = [...rigRouteList, ...linkRoutes, ...planRoutes];
+export const rigRoutes = [
+  ...revisionRoutes,
+  ...massSetRoutes,
+  ...atTheRig('each', listRoutes),
+  ...atTheRig(anyRig, makeRoutes),
+  ...atTheRig(rigOfAddress, readRoutes, { urgent: true, elseStored: true }),
+  ...atTheRig(rigOfAddress, checkRoutes, { urgent: true }),
+  ...atTheRig(rigOfAddress, [...reviseRoutes, ...linkRoutes]),
+];

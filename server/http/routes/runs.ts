@@ -6,6 +6,7 @@ import { findMassSet, findRig } from '@/server/store/rigs';
 import * as store from '@/server/store/runs-read';
 import { archiveInputOf, assertEnded } from '../archive-input';
 import { assertFreshTap, beginRehearsal, beginRun } from '../begin-run';
+import { atTheRig, rigOfBody, rigOfItsRun } from '../desk/at-the-rig';
 import { isDatabaseAway } from '../errors';
 import { isoOf } from '../maker';
 import { decodeCursor, pageFrom } from '../paging';
@@ -14,7 +15,7 @@ import { mount } from '../route-context';
 import { startSubject } from '../reviews';
 import { loadRun as load, runSummaryOf, storedRunView } from '../run-view';
 
-const startRoutes = [
+const listRoutes = [
   mount(contracts.listRuns, async ({ query, membership, services }) => {
     const { labId } = membership;
     const after = decodeCursor(query.cursor, ['number', 'string']);
@@ -23,14 +24,16 @@ const startRoutes = [
       after: after === null ? null : { createdAt: after[0], id: after[1] },
     };
     const rows = await store.listRuns(services.database.db, asked).catch((error: unknown) => {
-      if (!asked.activeOnly || !isDatabaseAway(error)) throw error;
+      if (!asked.activeOnly || !isDatabaseAway(error) || !services.config.roles.includes('rig')) throw error;
       return null;
     });
     if (rows === null) return { items: services.activeRuns.summaries(labId).slice(0, query.limit), next: null };
     const page = pageFrom(rows, query.limit, (row) => [row.createdAt, row.id]);
     return { items: page.items.map(runSummaryOf), next: page.next };
   }),
+];
 
+const startRoutes = [
   mount(contracts.startRun, async (context) => {
     const { body, membership, services } = context;
     const { db } = services.database;
@@ -52,7 +55,9 @@ const startRoutes = [
     });
     return runSummaryOf(run);
   }),
+];
 
+const rehearseRoutes = [
   mount(contracts.rehearse, async (context) => {
     const { body, membership, services } = context;
     const { db } = services.database;
@@ -73,7 +78,9 @@ const startRoutes = [
     });
     return runSummaryOf(run);
   }),
+];
 
+const viewRoutes = [
   mount(contracts.getRun, async ({ params, membership, services }) => {
     const view = services.activeRuns.view(membership.labId, params.runId);
     return view ?? storedRunView(services, await load(services, membership.labId, params.runId));
@@ -124,4 +131,10 @@ const recordRoutes = [
   }),
 ];
 
-export const runRoutes = [...startRoutes, ...recordRoutes];
+export const runRoutes = [
+  ...listRoutes,
+  ...rehearseRoutes,
+  ...recordRoutes,
+  ...atTheRig(rigOfBody, startRoutes),
+  ...atTheRig(rigOfItsRun, viewRoutes, { urgent: true, elseStored: true }),
+];

@@ -3,7 +3,7 @@ import type { SimulatedRun } from '@/shared/archive/run-records';
 import { CutShort, type Job } from '@/server/interfaces/jobs';
 import { findOrMakeChannel } from '@/server/store/imports';
 import { findRun, markRunFailed, storeRehearsal } from '@/server/store/runs-read';
-import { storedRunView } from '../run-view';
+import { progressOf, storedRunView } from '../run-view';
 import type { Services } from '../services';
 
 /** Kind of the jobs that rehearse. */
@@ -42,5 +42,5 @@ export async function workRehearsal(services: Services, job: Job): Promise<void>
     services.log.error({ err: error, runId }, 'a rehearsal failed');
   }
   const done = await findRun(db, labId, runId);
-  if (done !== null) services.live.changed(runId, { events: [], steps: [], view: await storedRunView(services, done) });
+  if (done !== null) services.runChanged(runId, { events: [], steps: [], progress: progressOf(await storedRunView(services, done)) });
 }

@@ -98,6 +98,7 @@ async function mailIn(bytes: Buffer) {
 
 const testConfig = (stateDir: string, changes: Partial<ServerConfig>): ServerConfig => ({
   mode: 'test',
+  roles: ['web', 'rig', 'worker'],
   databaseUrl: '',
   host: '127.0.0.1',
   port: 4460,

@@ -5,6 +5,7 @@ const least = { DATABASE_URL: 'postgres://somebody@127.0.0.1/evenfall' };
 test('one variable is enough; the rest has defaults', () => {
   expect(readConfig(least)).toMatchObject({
     mode: 'development',
+    roles: ['web', 'rig', 'worker'],
     host: '127.0.0.1',
     port: 4460,
     publicUrl: null,
@@ -20,6 +21,14 @@ test('an empty variable counts as absent, an address loses its last slash', () =
     port: 4460,
     publicUrl: 'https://balance.quillfen.example',
   });
+});
+
+test('a process plays the roles that it is given, and no others', () => {
+  expect(readConfig({ ...least, EVENFALL_ROLES: 'Worker, web' }).roles).toEqual(['web', 'worker']);
+  expect(() => readConfig({ ...least, EVENFALL_ROLES: 'web,engine' })).toThrow(
+    'EVENFALL_ROLES: "engine" is no role of a process; the roles are web, rig, worker, with commas between them',
+  );
+  expect(() => readConfig({ ...least, EVENFALL_ROLES: ' , ' })).toThrow('EVENFALL_ROLES: names no role');
 });
 
 test('everything that is wrong is named at once, with what it may be', () => {

@@ -20,11 +20,13 @@ afterAll(() => lab.stop());
 test('healthz says that the process lives, readyz that it can serve and drives its rigs', async () => {
   await request(lab.built.app).get('/healthz').expect(200, 'ok\n');
   const ready = await request(lab.built.app).get('/readyz').expect(200);
-  expect(ready.body).toEqual({ ready: true, database: 'answers', rigs: 'driving' });
+  expect(ready.body).toEqual({
+    ...{ ready: true, roles: ['web', 'rig', 'worker'], database: 'answers', rigs: 'driving', others: 'none' },
+  });
   const { pool } = lab.services.database;
   const query = pool.query.bind(pool);
   Object.assign(pool, { query: () => Promise.reject(new Error('gone')) });
-  expect((await request(lab.built.app).get('/readyz').expect(503)).body).toEqual({ ready: false, database: 'away', rigs: 'unknown' });
+  expect((await request(lab.built.app).get('/readyz').expect(503)).body).toMatchObject({ ready: false, database: 'away', rigs: 'unknown' });
   await request(lab.built.app).get('/healthz').expect(200);
   Object.assign(pool, { query });
 });
