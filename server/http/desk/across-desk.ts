@@ -20,9 +20,14 @@ const againMs = 400;
 /** Whoever has taken a question may take so long over it, ms. */
 const longestWorkMs = 15_000;
 
+interface Key {
+  labId: string;
+  id: string;
+}
+
 interface Waiting {
-  key: { labId: string; id: string };
-  done(reply: RigReply | null): void;
+  key: Key;
+  done(reply: RigReply): void;
 }
 
 /** The desk of a process without rigs: the question goes to the process that drives the rig, and its answer comes back. */
@@ -89,9 +94,9 @@ export class AcrossDesk implements RigDesk {
     }
   }
 
-  private async sendUrgent(question: RigQuestion, key: Waiting['key'], to: Addressee): Promise<RigReply> {
+  private async sendUrgent(question: RigQuestion, key: Key, to: Addressee): Promise<RigReply> {
     const { post, clock } = this.parts;
-    const reply = this.replyTo(key, longestSilenceMs);
+    const reply = this.expect(key);
     const say = () => post.tell({ kind: 'urgent', id: key.id, to, question });
     let cancel = () => undefined as void;
     const again = () => {
@@ -103,7 +108,7 @@ export class AcrossDesk implements RigDesk {
     again();
     try {
       await say();
-      const found = await reply;
+      const found = await this.within(longestSilenceMs, reply);
       if (found === null) throw rigsAway('Whether it was heard is not known.');
       return found;
     } finally {
@@ -112,28 +117,33 @@ export class AcrossDesk implements RigDesk {
   }
 
   /** A question that sets something in motion is taken once or withdrawn: what nobody took in time never happens. */
-  private async lay(question: RigQuestion, key: Waiting['key'] & { to: Addressee }): Promise<RigReply> {
+  private async lay(question: RigQuestion, key: Key & { to: Addressee }): Promise<RigReply> {
     const { post } = this.parts;
-    const early = this.replyTo(key, longestSilenceMs);
+    const reply = this.expect(key);
     await post.ask(question, key);
-    const soon = await early;
+    const soon = await this.within(longestSilenceMs, reply);
     if (soon !== null) return soon;
     if (await post.withdraw(key)) throw rigsAway(nothingDone);
-    const late = this.replyTo(key, longestWorkMs - longestSilenceMs);
     // It may have been answered while nobody here could hear.
-    const found = (await post.collect(key)) ?? (await late);
+    const found = (await post.collect(key)) ?? (await this.within(longestWorkMs - longestSilenceMs, reply));
     if (found === null) throw rigsAway(maybeDone);
     return found;
   }
 
-  private replyTo(key: Waiting['key'], withinMs: number): Promise<RigReply | null> {
+  /** The reply, whenever it comes. */
+  private expect(key: Key): Promise<RigReply> {
     return new Promise((resolve) => {
-      const cancel = this.parts.clock.after(withinMs, () => resolve(null));
-      const done = (reply: RigReply | null) => {
+      this.waiting.set(key.id, { key, done: resolve });
+    });
+  }
+
+  private within(ms: number, reply: Promise<RigReply>): Promise<RigReply | null> {
+    return new Promise((resolve) => {
+      const cancel = this.parts.clock.after(ms, () => resolve(null));
+      void reply.then((found) => {
         cancel();
-        resolve(reply);
-      };
-      this.waiting.set(key.id, { key, done });
+        resolve(found);
+      });
     });
   }
 
