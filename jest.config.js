@@ -32,5 +32,6 @@ module.exports = {
       modulePathIgnorePatterns: ['<rootDir>/dist', '<rootDir>/.state'],
     },
     { ...node, displayName: 'e2e', testMatch: ['<rootDir>/tests/e2e/**/*.test.ts'] },
+    { ...node, displayName: 'e2e-row', testMatch: ['<rootDir>/tests/e2e/row.ts'] },
   ],
 };

@@ -44,7 +44,11 @@ for (const report of [inBrowser, other]) rmSync(report, { force: true });
 async function all() {
   const [checked, ...tested] = await Promise.all([
     standingBack(process.execPath, [join(root, 'scripts', 'check.mjs')], { cwd: root }),
-    ensureWebBuild().then(() => jest(['--selectProjects', 'e2e', '-i'], inBrowser)),
+    ensureWebBuild().then(() =>
+      jest(['--selectProjects', 'e2e-row', '-i'], inBrowser, (command, args, options) =>
+        pass(command, args, { ...options, env: { ...env, EVENFALL_SCREENS: 'failed' } }),
+      ),
+    ),
     jest(['--selectProjects', 'node', 'web', '-i'], other, standingBack),
   ]);
   return { checked, tested: Math.max(...tested) };
@@ -59,7 +63,14 @@ const ran = await (whole ? all() : some());
 let { tested } = ran;
 const reports = (whole ? [inBrowser, other] : [other]).map((report) => JSON.parse(readFileSync(report, 'utf8')));
 const sum = (key) => reports.reduce((total, report) => total + report[key], 0);
-const failed = reports.flatMap(({ testResults }) => testResults.filter(({ status }) => status === 'failed').map(({ name }) => name));
+/** The files behind the failures; the row with the browser is one file that names others by its outermost descriptions. */
+const failed = reports
+  .flatMap(({ testResults }) => testResults.filter(({ status }) => status === 'failed'))
+  .flatMap(({ name, assertionResults }) => {
+    if (!name.endsWith(join('e2e', 'row.ts'))) return [name];
+    const told = assertionResults.filter(({ status }) => status === 'failed').map(({ ancestorTitles: [file] }) => file);
+    return told.length === 0 ? [name] : [...new Set(told)].map((file) => join(root, 'tests', 'e2e', `${file}.test.ts`));
+  });
 let stillFailed = sum('numFailedTests');
 if (whole && failed.length > 0 && failed.every((name) => inRealTime.test(name))) {
   say(`Second try, alone, for what runs in real time and may starve on a busy machine:\n  ${failed.join('\n  ')}`);

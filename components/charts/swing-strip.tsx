@@ -1,4 +1,4 @@
-import { useMemo } from 'react';
+import { memo, useMemo } from 'react';
 import { Pressable, View, type GestureResponderEvent } from 'react-native';
 import { Label } from '@/components/ui';
 import { formatClock, zoneName } from '@/shared/lib/format-time';
@@ -37,7 +37,7 @@ export interface SwingStripProps {
  * The swing strip: when the sources stand near (upper lane, marks up) and far (lower lane, marks down), how they swing,
  * and how the pendulum answers: measured solid, predicted fainter, equilibria dashed, now in lamp amber.
  */
-export function SwingStrip(props: SwingStripProps) {
+export const SwingStrip = memo(function SwingStrip(props: SwingStripProps) {
   const { steps, timeZone, title, measured, predicted, equilibrium, nowUtcMs, selectedKey, onSelect, size = 'full' } = props;
   const mini = size === 'mini';
   const heightPx = props.heightPx ?? (mini ? 44 : 150);
@@ -48,8 +48,11 @@ export function SwingStrip(props: SwingStripProps) {
     () => layoutStrip({ steps, window, widthPx: width, heightPx, lanePx, measured, predicted, equilibrium, nowUtcMs, selectedKey }),
     [steps, window, width, heightPx, lanePx, measured, predicted, equilibrium, nowUtcMs, selectedKey],
   );
-  const words = { steps, timeZone, nowUtcMs, hasMeasured: (measured?.x.length ?? 0) > 0 };
-  const summary = stripSummary(words);
+  const hasMeasured = (measured?.x.length ?? 0) > 0;
+  // The words change only when another step begins: the table of a long run is not made anew with every look at the clock.
+  const begunUtcMs = nowUtcMs == null ? nowUtcMs : (steps.findLast((step) => step.startUtcMs <= nowUtcMs)?.startUtcMs ?? 0);
+  const words = useMemo(() => ({ steps, timeZone, nowUtcMs: begunUtcMs, hasMeasured }), [steps, timeZone, begunUtcMs, hasMeasured]);
+  const summary = useMemo(() => stripSummary(words), [words]);
   const picture = (
     <View role="img" aria-label={`${title}: ${summary}`} style={{ height: heightPx }}>
       <StripDrawing layout={layout} widthPx={width} heightPx={heightPx} mini={mini} />
@@ -66,7 +69,7 @@ export function SwingStrip(props: SwingStripProps) {
       {mini ? null : <StripTable title={title} words={words} />}
     </View>
   );
-}
+});
 
 function Axis({ window, timeZone }: { window: StripWindow; timeZone: string }) {
   const clock = (utcMs: number) =>
@@ -82,7 +85,7 @@ function Axis({ window, timeZone }: { window: StripWindow; timeZone: string }) {
   );
 }
 
-function StripTable({ title, words }: { title: string; words: Parameters<typeof stripRows>[0] }) {
+const StripTable = memo(function StripTable({ title, words }: { title: string; words: Parameters<typeof stripRows>[0] }) {
   const { rows, left } = useMemo(() => stripRows(words), [words]);
   const columns = ['Step', 'Starts', 'Lasts', 'Turntable', 'State'];
   return (
@@ -93,7 +96,7 @@ function StripTable({ title, words }: { title: string; words: Parameters<typeof 
       remark={left > 0 ? `${left} more steps are not listed here.` : undefined}
     />
   );
-}
+});
 
 interface SelectableProps extends Pick<SwingStripProps, 'title' | 'steps' | 'selectedKey'> {
   onSelect: (key: string) => void;

@@ -1,4 +1,4 @@
-import { useState } from 'react';
+import { useMemo, useState } from 'react';
 import { View } from 'react-native';
 import { nowWindow, SwingStrip, wholeWindow } from '@/components/charts';
 import { Button, Label, Num, Panel, useWide } from '@/components/ui';
@@ -14,11 +14,16 @@ interface LiveStripProps {
   lost: boolean;
 }
 
+/** How often the strip moves on, ms: less than a pixel, and a phone that shows a run all night draws it anew only as often. */
+const strideMs = 2000;
+
 /** The strip of a running run around the present, or the whole night. */
 export function LiveStrip({ strip, timeZone, serverNowMs, title, lost }: LiveStripProps) {
   const wide = useWide();
   const [whole, setWhole] = useState(false);
-  const window = whole ? wholeWindow(strip.steps) : nowWindow(strip.steps, serverNowMs, wide ? 6 : 3);
+  const { steps } = strip;
+  const nowUtcMs = Math.floor(serverNowMs / strideMs) * strideMs;
+  const window = useMemo(() => (whole ? wholeWindow(steps) : nowWindow(steps, nowUtcMs, wide ? 6 : 3)), [whole, steps, nowUtcMs, wide]);
   const reading = deflectionParts(strip.newestRad);
   return (
     <Panel className="gap-2" testID="live-strip">
@@ -31,14 +36,14 @@ export function LiveStrip({ strip, timeZone, serverNowMs, title, lost }: LiveStr
         </Num>
       </View>
       <SwingStrip
-        steps={strip.steps}
+        steps={steps}
         timeZone={timeZone}
         title={title}
         window={window}
         measured={strip.measured}
         predicted={strip.predicted}
         equilibrium={strip.equilibrium}
-        nowUtcMs={serverNowMs}
+        nowUtcMs={nowUtcMs}
         heightPx={wide ? 210 : 150}
         axis={false}
       />

@@ -1,3 +1,4 @@
+import { memo } from 'react';
 import { View } from 'react-native';
 import { PlanView } from '@/components/charts';
 import { Label, Num, Panel } from '@/components/ui';
@@ -21,7 +22,7 @@ const sources: Record<StepRowView['angleSource'], string> = {
 };
 
 /** The turntable from above with its angle in figures and the last motion's end with its uncertainty. */
-export function PlanPanel({ view, rows, beat, lost, large = false }: PlanPanelProps) {
+export const PlanPanel = memo(function PlanPanel({ view, rows, beat, lost, large = false }: PlanPanelProps) {
   const moved = rows.findLast((row) => (row.kind === 'swing' || row.kind === 'home') && row.endUtcMs !== null);
   const angleDeg = beat?.angleDeg ?? moved?.angleEndDeg ?? null;
   return (
@@ -50,4 +51,4 @@ export function PlanPanel({ view, rows, beat, lost, large = false }: PlanPanelPr
       </View>
     </Panel>
   );
-}
+});

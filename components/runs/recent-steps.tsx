@@ -1,4 +1,5 @@
 import { Link, type Href } from 'expo-router';
+import { memo } from 'react';
 import { View } from 'react-native';
 import { Body, Icon, Label, Num, Row, Section } from '@/components/ui';
 import type { StepRowView } from '@/shared/contracts/runs';
@@ -15,7 +16,7 @@ interface RecentStepsProps {
 }
 
 /** The newest rows of the step log, and the way to all of it. */
-export function RecentSteps({ runId, protocol, rows, timeZone, count = 6 }: RecentStepsProps) {
+export const RecentSteps = memo(function RecentSteps({ runId, protocol, rows, timeZone, count = 6 }: RecentStepsProps) {
   const newest = rows.slice(-count).reverse();
   return (
     <Section title="Step log" trailing={<TextLink href={`/runs/${runId}/log`} label="All steps" />}>
@@ -27,7 +28,7 @@ export function RecentSteps({ runId, protocol, rows, timeZone, count = 6 }: Rece
       </View>
     </Section>
   );
-}
+});
 
 function StepLine({ row, title, timeZone, last }: { row: StepRowView; title: string; timeZone: string; last: boolean }) {
   const mark = stepMark(row);

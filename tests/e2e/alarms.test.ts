@@ -56,10 +56,10 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.reads('alarm-bar', /Interlock or door opened.*High alarm, North bench: not acknowledged/);
     expect(await hand.page.getByRole('alert').first().isVisible()).toBe(true);
     await hand.shoots('alarm-bar');
-    await hand.goes('/alarms', 'alarms-screen');
+    await hand.follows('/alarms', 'alarms-screen');
     await hand.reads('standing-alarms', /Interlock or door opened.*High, North bench: not acknowledged/);
     await hand.shoots('alarms');
-    await hand.goes('/calendar', 'calendar-screen');
+    await hand.follows('/calendar', 'calendar-screen');
     await hand.taps(hand.at('alarm-bar').getByRole('link'));
     await hand.at('alarm-screen').waitFor();
     await hand.sees(/What to do/);
@@ -110,7 +110,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
         ...{ labId: demoIds.lab, kind: 'mail.schedule', payload: {}, state: 'given-up', attempts: 8, maxAttempts: 8 },
         ...{ lastError: '550 5.1.1 no such user here', dueAt: 0, createdAt: Date.now(), finishedAt: Date.now() },
       });
-    await hand.goes('/lab', 'lab-screen');
+    await hand.follows('/lab', 'lab-screen');
     await hand.reads('given-up-job', /Mail about a scheduled start.*550 5\.1\.1.*8 tries/);
     await hand.at('given-up-job').scrollIntoViewIfNeeded();
     await hand.shoots('given-up-job');
@@ -120,14 +120,14 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
   });
 
   chapter('a channel gets a limit, and the review of a start says whom it rings', async () => {
-    await hand.goes(`/rigs/${demoIds.rig}`, 'rig-screen');
+    await hand.follows(`/rigs/${demoIds.rig}`, 'rig-screen');
     await hand.taps('add-limit');
     await hand.types('limit-greatest', '0,002');
     await hand.shoots('limit-sheet');
     await hand.taps('limit-save');
     await hand.at('limit-sheet').waitFor({ state: 'detached' });
     await hand.reads('channel-limits', /deflection: not above 0.002 rad/);
-    await hand.goes(`/rigs/${demoIds.rig}/start?protocol=${protocol.protocolId}&revision=1`, 'start-screen');
+    await hand.follows(`/rigs/${demoIds.rig}/start?protocol=${protocol.protocolId}&revision=1`, 'start-screen');
     await hand.sees('Ottilie Vanterpool (you), then Casimir Thornquist, then Tam Ferrowdale');
     await hand.shoots('start-on-call');
   });

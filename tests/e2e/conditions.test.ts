@@ -52,13 +52,17 @@ tell('the pendulum is waited for: value, limit, and time left until it gives up'
 });
 
 tell('good dwells are counted, and what the run has reached is shown', async () => {
+  await hand.looksAway();
   await lab().pass(1800 + 4 * 420);
+  await hand.goes(`/runs/${runId}`, 'run-screen');
   await hand.reads('reached', /\d of \d.*dwells good.*mrad.*near − far so far.*%.*u reached/);
   await hand.shoots('u-reached');
 });
 
 tell('a prompt disarms the rig; it is confirmed when the rig was armed again', async () => {
+  await hand.looksAway();
   await lab().pass(1700);
+  await hand.goes(`/runs/${runId}`, 'run-screen');
   await hand.reads('waiting', 'Turn the balls by 90° and close the case');
   await hand.reads('confirm-why', /Arm it again at the rig, then confirm/);
   expect(await hand.isEnabled('confirm-prompt')).toBe(false);
@@ -104,21 +108,23 @@ tell('a device gets a token that is shown once, and revoking it ends it', async 
 
 tell('the editor offers what can be waited for', async () => {
   const { body } = await hand.asks('POST', '/protocols', { body: { document: waiting } });
+  await hand.goes(`/protocols/${String(body.id)}`, 'editor');
   for (const [step, name] of [
     [3, 'edit-settle'],
     [4, 'edit-repeat'],
     [5, 'edit-proof'],
     [6, 'edit-prompt'],
   ] as const) {
-    await hand.goes(`/protocols/${String(body.id)}`, `step-${String(step)}`);
     await hand.taps(`step-${String(step)}`);
     await hand.taps(`step-${String(step)}`);
     await hand.at('step-details').waitFor();
     await hand.shoots(name);
+    await hand.taps('sheet-close');
+    await hand.at('step-details').waitFor({ state: 'detached' });
   }
   const desk = new Hand(await lab().open('wide', 'owner'));
   await desk.goes(`/protocols/${String(body.id)}`, 'good-when');
   await desk.shoots('edit-protocol');
-  await desk.goes(`/rigs/${demoIds.rig}`, 'devices');
+  await desk.follows(`/rigs/${demoIds.rig}`, 'devices');
   await desk.shoots('devices');
 });

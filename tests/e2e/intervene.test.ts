@@ -221,7 +221,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
   });
 
   chapter('after a stop the rig is no longer armed', async () => {
-    await hand.goes(`/rigs/${demoIds.rig}`, 'rig-screen');
+    await hand.follows(`/rigs/${demoIds.rig}`, 'rig-screen');
     await hand.reads('disarmed', /Not armed since .*\(Ilse Marrowby\): the run was stopped\./);
     expect((await viewOf(runId)).state).toBe('stopped');
   });

@@ -52,7 +52,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
   });
 
   chapter('the rig itself has not moved and is not busy', async () => {
-    await hand.goes(`/rigs/${demoIds.rig}`, 'rig-screen');
+    await hand.follows(`/rigs/${demoIds.rig}`, 'rig-screen');
     await hand.sees('at rest');
     expect(await hand.page.getByTestId('running-now').count()).toBe(0);
     const { items } = await read(lab(), '?active=true&limit=20');

@@ -37,14 +37,14 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
   });
 
   chapter('the step log marks the dwell in doubt', async () => {
-    await hand.goes(`/runs/${runId}/log`, 'step-log');
+    await hand.follows(`/runs/${runId}/log`, 'step-log');
     await hand.reads('angle-unproved', 'counted, not proved');
     expect(await hand.at('angle-unproved').count()).toBe(1);
     await hand.shoots('slip-log');
   });
 
   chapter('the rig keeps the slip until it is homed', async () => {
-    await hand.goes(`/rigs/${demoIds.rig}`, 'rig-screen');
+    await hand.follows(`/rigs/${demoIds.rig}`, 'rig-screen');
     await hand.reads('position-slip', /0\.900°/);
     await hand.shoots('slip-rig');
   });

@@ -1,5 +1,4 @@
-import { mkdirSync, mkdtempSync, rmSync } from 'node:fs';
-import { tmpdir } from 'node:os';
+import { mkdirSync } from 'node:fs';
 import { join } from 'node:path';
 import { chromium, type BrowserContext, type Page } from 'playwright-core';
 
@@ -22,6 +21,8 @@ const flags = [
   '--disable-background-networking',
   '--disable-component-update',
   '--disable-sync',
+  // Pages live for seconds: compiling their program with much care costs more than it gives back.
+  '--js-flags=--no-maglev,--no-opt',
 ];
 
 export interface Browser {
@@ -33,10 +34,17 @@ export interface Browser {
   close(): Promise<void>;
 }
 
-/** Debian's Chromium with a fresh profile at one of the two sizes; `installs`: it may keep the built program, which costs each profile a fetch of it all. */
-export async function openBrowser(baseURL: string, size: Size, installs = false): Promise<Browser> {
-  const profile = mkdtempSync(join(tmpdir(), 'evenfall-browser-'));
-  const context = await chromium.launchPersistentContext(profile, {
+/** A browser that is between two users, with what it knows of the program at this address. */
+interface Idle {
+  key: string;
+  context: BrowserContext;
+}
+const idle: Idle[] = [];
+/** How long a browser waits for its next user before it ends, ms. */
+const idleMs = 20_000;
+
+async function launch(baseURL: string, size: Size, installs: boolean): Promise<BrowserContext> {
+  const context = await chromium.launchPersistentContext('', {
     executablePath: '/usr/bin/chromium-headless-shell',
     headless: true,
     args: flags,
@@ -51,7 +59,40 @@ export async function openBrowser(baseURL: string, size: Size, installs = false)
     ...(size === 'phone' ? { isMobile: true, hasTouch: true } : {}),
   });
   await context.addInitScript({ content: 'globalThis.__name = (f) => f;' });
-  const page = context.pages()[0] ?? (await context.newPage());
+  return context;
+}
+
+/** A page of a browser that nobody uses, without anything its last user left but the program of this address; or of a new one. */
+async function blankPage(baseURL: string, key: string, fresh: () => Promise<BrowserContext>) {
+  const kept = idle.findIndex((one) => one.key === key);
+  const context = (kept < 0 ? null : idle.splice(kept, 1)[0]?.context) ?? (await fresh());
+  const page = await context.newPage();
+  if (kept < 0) return { context, page };
+  await context.clearCookies();
+  const session = await context.newCDPSession(page);
+  await session.send('Storage.clearDataForOrigin', {
+    origin: baseURL,
+    storageTypes: 'local_storage,indexeddb,cache_storage,service_workers',
+  });
+  await session.detach();
+  return { context, page };
+}
+
+async function closeIfIdle(one: Idle): Promise<void> {
+  const place = idle.indexOf(one);
+  if (place < 0) return;
+  idle.splice(place, 1);
+  await one.context.close();
+}
+
+/**
+ * Debian's Chromium at one of the two sizes, as somebody has it who was never here. To start one and to read the program for the first time
+ * costs more than most tests, so one that is closed is cleared and used again for the same address and size. `installs`: it may keep the
+ * built program, is really new and really ends.
+ */
+export async function openBrowser(baseURL: string, size: Size, installs = false): Promise<Browser> {
+  const key = `${size} ${baseURL}`;
+  const { context, page } = await blankPage(baseURL, installs ? '' : key, () => launch(baseURL, size, installs));
   page.setDefaultTimeout(15_000);
   const errors: string[] = [];
   page.on('pageerror', (error) => errors.push(String(error)));
@@ -64,14 +105,18 @@ export async function openBrowser(baseURL: string, size: Size, installs = false)
     size,
     errors,
     close: async () => {
-      await context.close();
-      rmSync(profile, { recursive: true, force: true });
+      if (installs) return context.close();
+      await page.close();
+      const one = { key, context };
+      idle.push(one);
+      setTimeout(() => void closeIfIdle(one), idleMs).unref();
     },
   };
 }
 
-/** Keeps a picture of the page as test output. */
+/** Keeps a picture of the page as test output. Where all tests run nobody looks at 300 of them: only those of failures are kept. */
 export async function shoot(browser: Browser, name: string): Promise<void> {
+  if (process.env.EVENFALL_SCREENS === 'failed' && name !== 'failed') return;
   mkdirSync(screens, { recursive: true });
   await browser.page.screenshot({ path: join(screens, `${name}-${browser.size}.png`) });
 }

@@ -3,9 +3,6 @@ import { demoIds } from '@/db/demo/seed';
 import type { Locator } from 'playwright-core';
 import { picture, shoot, type Browser } from '../../support/browser';
 
-/** How long a press that moves masses is kept: the 1.5 s that the page asks for, and a little. */
-const keptMs = 1650;
-
 /** Text as it is compared: the narrow spaces of numbers and units as plain ones. */
 export const plain = (text: string) => text.replace(/[\u00a0\u2009\u202f]/g, ' ').trim();
 
@@ -39,6 +36,25 @@ export class Hand {
     await this.at(arrives).waitFor();
   }
 
+  /** From page to page of the program as its own links lead, without loading it anew where it is there already. */
+  async follows(path: string, arrives: string): Promise<void> {
+    if (!(await this.page.locator('nav').first().isVisible())) return this.goes(path, arrives);
+    await this.leads(path);
+    await this.at(arrives).waitFor();
+  }
+
+  async leads(path: string): Promise<void> {
+    await this.page.evaluate((to) => {
+      history.pushState({}, '', to);
+      window.dispatchEvent(new PopStateEvent('popstate', { state: {} }));
+    }, path);
+  }
+
+  /** Leaves the program: nothing is drawn while much time passes. */
+  async looksAway(): Promise<void> {
+    await this.page.goto('about:blank');
+  }
+
   /** A request to the demo lab from the page itself, with its session. */
   async asks(method: 'GET' | 'POST', path: string, { body, etag }: { body?: object; etag?: string } = {}) {
     const headers = {
@@ -64,23 +80,25 @@ export class Hand {
     await this.taps(this.page.getByRole(role, { name, exact: typeof name === 'string' }).first());
   }
 
-  /** Presses and keeps, with a finger or with the mouse, for `ms`. */
-  async keeps(testId: string, ms = keptMs): Promise<void> {
+  /** Presses and keeps, with a finger or with the mouse, until the page says that it is long enough, or lets go too early, after `ms`. */
+  async keeps(testId: string, ms?: number): Promise<void> {
     const place = this.at(testId);
+    await place.and(this.page.locator(':not([aria-disabled="true"])')).waitFor();
     await place.scrollIntoViewIfNeeded();
     const box = await place.boundingBox();
     if (box === null) throw new Error(`${testId} is not on the page`);
     const point = { x: box.x + box.width / 2, y: box.y + box.height / 2 };
+    const enough = () => (ms === undefined ? place.getByText('Now let go').waitFor() : this.page.waitForTimeout(ms));
     if (this.browser.size === 'wide') {
       await this.page.mouse.move(point.x, point.y);
       await this.page.mouse.down();
-      await this.page.waitForTimeout(ms);
+      await enough();
       await this.page.mouse.up();
       return;
     }
     const finger = await this.browser.context.newCDPSession(this.page);
     await finger.send('Input.dispatchTouchEvent', { type: 'touchStart', touchPoints: [point] });
-    await this.page.waitForTimeout(ms);
+    await enough();
     await finger.send('Input.dispatchTouchEvent', { type: 'touchEnd', touchPoints: [] });
     await finger.detach();
   }
@@ -192,7 +210,7 @@ export async function until(holds: () => Promise<boolean> | boolean, what: strin
   for (;;) {
     if (await holds()) return;
     if (performance.now() > endMs) throw new Error(`waited ${String(withinMs / 1000)} s for ${typeof what === 'string' ? what : what()}`);
-    await new Promise((resolve) => setTimeout(resolve, 50));
+    await new Promise((resolve) => setTimeout(resolve, 100));
   }
 }
 

@@ -11,6 +11,7 @@ import type { Role } from '@/shared/contracts/roles';
 import { openBrowser, type Browser, type Size } from '../../support/browser';
 import { freshDatabase, type TestDatabase } from '../../support/database';
 import { LabServer, World } from '../../support/lab-server';
+import { listensAgain } from './one-address';
 
 const webDir = join(__dirname, '../../../dist');
 /** How often virtual time is made to follow the clock on the wall, ms. */
@@ -50,7 +51,7 @@ export class Lab {
     const mailbox = await startDemoMailbox({ folder: mkdtempSync(join(tmpdir(), 'evenfall-mail-')), clock: world.clock });
     const mail = createSmtpMail({ url: mailbox.url, from: 'Evenfall <evenfall@quillfen.example>' });
     const server = await LabServer.start(database, { world, config: { webDir }, overrides: { mail } });
-    const lab = new Lab(server, { address: await server.built.listen(), database, mailbox, closeMail: () => mail.close() });
+    const lab = new Lab(server, { address: await listensAgain(server.built), database, mailbox, closeMail: () => mail.close() });
     lab.letTimeFlow();
     return lab;
   }

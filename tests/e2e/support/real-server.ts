@@ -7,6 +7,7 @@ import type { Role } from '@/shared/contracts/roles';
 import { openBrowser, type Browser, type Size } from '../../support/browser';
 import { freshDatabase, type TestDatabase } from '../../support/database';
 import { sha256, testConfig } from '../../support/lab-server';
+import { listensAgain } from './one-address';
 
 /** The demo lab in real time, for what cannot be hurried: a real port and a process behind it. */
 export class RealServer {
@@ -30,7 +31,7 @@ export class RealServer {
       overrides: { tasks: heavyTasks, ticks: false, exitDelayMs: 1_000 },
     });
     await built.start();
-    return new RealServer(await built.listen(), built, database);
+    return new RealServer(await listensAgain(built), built, database);
   }
 
   get services(): BuiltServer['services'] {
