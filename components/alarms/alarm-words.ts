@@ -1,5 +1,5 @@
 import type { IconName, Tone } from '@/components/ui';
-import type { AlarmHopView, AlarmView } from '@/shared/contracts/alarms';
+import type { AlarmHopView, AlarmView, RunAlarm } from '@/shared/contracts/alarms';
 import { formatClock, formatDay } from '@/shared/lib/format-time';
 
 /** Alarms in words: state by word, shape and colour. */
@@ -93,4 +93,15 @@ export function whenWords(iso: string, { timeZone, nowIso }: { timeZone: string;
   const clock = formatClock(at, { timeZone, precision: 'seconds' });
   const day = formatDay(at, timeZone);
   return day === formatDay(Date.parse(nowIso), timeZone) ? clock : `${day} ${clock}`;
+}
+
+/** How long an alarm of a run stood, whom it was told, who saw it and what was done, each in a few words; `when` names an instant. */
+export function runAlarmFacts({ raisedAt, untilAt, told, seen, done, aside }: RunAlarm, when: (iso: string) => string): string[] {
+  const still = aside === null ? 'still there' : `put aside ${when(aside.at)}${aside.by === '' ? '' : ` by ${aside.by}`}: ${aside.why}`;
+  return [
+    ...(untilAt === raisedAt ? [] : [untilAt === null ? still : `until ${when(untilAt)}`]),
+    told.length === 0 ? 'nobody was told' : `told ${told.join(', ')}`,
+    seen === null ? 'seen by nobody' : `seen by ${seen.by} ${when(seen.at)}`,
+    ...(done === null ? [] : [`done by ${done.by} ${when(done.at)}${done.note === '' ? '' : `: ${done.note.replace(/\.$/, '')}`}`]),
+  ];
 }

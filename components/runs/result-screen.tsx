@@ -20,6 +20,7 @@ import { stagesOf } from './intervention';
 import { InterventionStages } from './intervention-stages';
 import { PairsPanel } from './pairs-panel';
 import { TextLink } from './recent-steps';
+import { RunAlarms } from './run-alarms';
 import { outcomeTitle, stateMark } from './run-words';
 
 /** A run that is over: how it ended, the whole night, and what it is worth so far. */
@@ -51,6 +52,7 @@ export function ResultScreen({ view }: { view: RunView }) {
       )}
       <Figures view={view} rows={steps.data?.data.items ?? null} result={result} />
       <PairsPanel runId={view.id} rows={rows} timeZone={timeZone} />
+      <RunAlarms runId={view.id} startedAt={view.startedAt} rehearsal={view.rehearsal} />
       <Links runId={view.id} />
       <View className="flex-row flex-wrap items-center gap-3">
         <DownloadLink

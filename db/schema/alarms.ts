@@ -81,11 +81,15 @@ export const alarmHistory = pgTable(
     /** Who did it; empty where it happened by itself. */
     by: text('by').notNull().default(''),
     words: text('words').notNull().default(''),
+    /** The run that it concerns, where the condition belongs to one. */
+    runId: key('run_id'),
   },
   (table) => [
     primaryKey({ columns: [table.labId, table.seq] }),
     foreignKey({ columns: [table.labId, table.alarmId], foreignColumns: [alarms.labId, alarms.id] }),
     index('alarm_history_alarm').on(table.labId, table.alarmId, table.seq),
+    index('alarm_history_at').on(table.labId, table.at),
+    index('alarm_history_run').on(table.labId, table.runId),
   ],
 );
 

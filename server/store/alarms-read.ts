@@ -1,5 +1,5 @@
-import { and, asc, desc, eq, gte, inArray, lt, lte, ne, sql } from 'drizzle-orm';
-import { alarmHistory, alarms } from '@/db/schema';
+import { and, asc, desc, eq, gte, inArray, isNull, lt, lte, ne, or, sql } from 'drizzle-orm';
+import { alarmHistory, alarmHops, alarms } from '@/db/schema';
 import type { AlarmRecord } from './alarms';
 import type { Handle } from './database';
 
@@ -72,7 +72,7 @@ export function alarmHistoryPage(
     .select({
       ...{ labId: alarmHistory.labId, seq: alarmHistory.seq, alarmId: alarmHistory.alarmId, at: alarmHistory.at },
       ...{ fact: alarmHistory.fact, occurrence: alarmHistory.occurrence, by: alarmHistory.by, words: alarmHistory.words },
-      ...{ code: alarms.code, rigId: alarms.rigId },
+      ...{ runId: alarmHistory.runId, code: alarms.code, rigId: alarms.rigId },
     })
     .from(alarmHistory)
     .innerJoin(alarms, and(eq(alarms.labId, alarmHistory.labId), eq(alarms.id, alarmHistory.alarmId)))
@@ -96,3 +96,67 @@ export const alarmCounts = (db: Handle, labId: string, sinceUtcMs: number): Prom
     .where(and(eq(alarmHistory.labId, labId), eq(alarmHistory.fact, 'raised'), gte(alarmHistory.at, sinceUtcMs)))
     .groupBy(alarms.code)
     .orderBy(desc(sql`count(*)`), asc(alarms.code));
+
+const mostOfRun = 200;
+/** An alarm that stands for longer than this before a run begins is no news of that run. */
+const standsAtMostMs = 7 * 86_400_000;
+
+export interface RunWindow {
+  labId: string;
+  runId: string;
+  rigId: string;
+  fromUtcMs: number;
+  /** Null: it goes on. */
+  toUtcMs: number | null;
+}
+
+/** History of the alarms that were raised for a run, and of those of its rig or of the whole lab that may have stood meanwhile; oldest first. */
+export async function historyOfRun(db: Handle, { labId, runId, rigId, fromUtcMs, toUtcMs }: RunWindow): Promise<AlarmHistoryRow[]> {
+  const { alarmId, occurrence, at } = alarmHistory;
+  const meanwhile = and(
+    isNull(alarmHistory.runId),
+    gte(at, fromUtcMs - standsAtMostMs),
+    toUtcMs === null ? undefined : lte(at, toUtcMs),
+    or(isNull(alarms.rigId), eq(alarms.rigId, rigId)),
+  );
+  const raised = await db
+    .select({ alarmId, occurrence })
+    .from(alarmHistory)
+    .innerJoin(alarms, and(eq(alarms.labId, alarmHistory.labId), eq(alarms.id, alarmId)))
+    .where(and(eq(alarmHistory.labId, labId), eq(alarmHistory.fact, 'raised'), or(eq(alarmHistory.runId, runId), meanwhile)))
+    .orderBy(desc(alarmHistory.seq))
+    .limit(mostOfRun);
+  if (raised.length === 0) return [];
+  return db
+    .select()
+    .from(alarmHistory)
+    .where(and(eq(alarmHistory.labId, labId), anyOf(raised, alarmHistory)))
+    .orderBy(asc(alarmHistory.seq));
+}
+
+interface OccurrenceKey {
+  alarmId: string;
+  occurrence: number;
+}
+
+const anyOf = (keys: readonly OccurrenceKey[], table: typeof alarmHistory | typeof alarmHops) =>
+  or(...keys.map(({ alarmId, occurrence }) => and(eq(table.alarmId, alarmId), eq(table.occurrence, occurrence))));
+
+/** Alarms by their ids. */
+export const alarmsById = (db: Handle, labId: string, ids: readonly string[]): Promise<AlarmRecord[]> =>
+  ids.length === 0
+    ? Promise.resolve([])
+    : db
+        .select()
+        .from(alarms)
+        .where(and(eq(alarms.labId, labId), inArray(alarms.id, [...ids])));
+
+/** Whom a message of these occurrences reached, each once. */
+export const reachedBy = (db: Handle, labId: string, keys: readonly OccurrenceKey[]): Promise<(OccurrenceKey & { name: string })[]> =>
+  keys.length === 0
+    ? Promise.resolve([])
+    : db
+        .selectDistinct({ alarmId: alarmHops.alarmId, occurrence: alarmHops.occurrence, name: alarmHops.name })
+        .from(alarmHops)
+        .where(and(eq(alarmHops.labId, labId), eq(alarmHops.outcome, 'sent'), anyOf(keys, alarmHops)))
+        .orderBy(asc(alarmHops.name));

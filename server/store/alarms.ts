@@ -178,7 +178,7 @@ const byItself: readonly AlarmFact[] = ['raised', 'returned', 'latched'];
 
 async function writeHistory(
   tx: Transaction,
-  { labId, id, snapshot, words: found }: AlarmRecord,
+  { labId, id, snapshot, runId, words: found }: AlarmRecord,
   { facts, event }: { facts: AlarmFact[]; event: AlarmEvent },
 ): Promise<void> {
   if (facts.length === 0) return;
@@ -186,7 +186,7 @@ async function writeHistory(
   const said = words[event.type]?.(event) ?? '';
   await tx.insert(alarmHistory).values(
     facts.map((fact) => ({
-      ...{ labId, alarmId: id, at: event.utcMs, fact, occurrence: snapshot.occurrence },
+      ...{ labId, alarmId: id, at: event.utcMs, fact, occurrence: snapshot.occurrence, runId },
       by: byItself.includes(fact) ? '' : by,
       words: fact === 'raised' ? found : said,
     })),

@@ -53,6 +53,30 @@ export const alarmHistorySchema = z.strictObject({
 });
 export type AlarmHistoryEntry = z.infer<typeof alarmHistorySchema>;
 
+/** One alarm of the night, as a run's result shows it. */
+export const runAlarmSchema = z.strictObject({
+  alarmId: idSchema,
+  occurrence: z.number().int(),
+  code: z.string(),
+  title: z.string(),
+  cause: z.string(),
+  consequence: z.string(),
+  priority: z.enum(['high', 'medium', 'low']),
+  rigName: z.string().nullable(),
+  /** What was found. */
+  words: z.string(),
+  raisedAt: instantSchema,
+  /** When it was over; null: it holds still, or was put aside before. */
+  untilAt: instantSchema.nullable(),
+  /** Names of those whom a message reached. */
+  told: z.array(z.string()),
+  seen: actSchema.nullable(),
+  done: z.strictObject({ ...actSchema.shape, note: z.string() }).nullable(),
+  /** Shelved, suppressed or taken out of service while it held; `by` is empty where nobody did it. */
+  aside: z.strictObject({ ...actSchema.shape, why: z.string() }).nullable(),
+});
+export type RunAlarm = z.infer<typeof runAlarmSchema>;
+
 export const alarmHopSchema = z.strictObject({
   seq: z.number().int(),
   at: instantSchema,
@@ -85,6 +109,17 @@ export const getAlarm = defineRoute({
   access: 'read',
   status: 200,
   response: z.strictObject({ alarm: alarmViewSchema, history: z.array(alarmHistorySchema), hops: z.array(alarmHopSchema) }),
+  problems: ['not-found'],
+});
+
+export const listRunAlarms = defineRoute({
+  name: 'listRunAlarms',
+  summary: 'Alarms that were raised for a run, and those of its rig and of the lab that stood while it went on, in order; the last 200',
+  method: 'GET',
+  path: '/labs/:labId/runs/:runId/alarms',
+  access: 'read',
+  status: 200,
+  response: z.strictObject({ items: z.array(runAlarmSchema) }),
   problems: ['not-found'],
 });
 

@@ -101,6 +101,13 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.tapsOn('History', 'radio');
     await hand.reads('alarm-history', /Acknowledged: Interlock or door opened, by Ottilie Vanterpool/);
     await hand.shoots('alarms-history');
+    await hand.goes(`/runs/${run?.id ?? ''}`, 'result-screen');
+    await hand.reads(
+      'run-alarms',
+      /Interlock or door opened.*The controller ended the motion.*told .*Ilse Marrowby.*seen by Ottilie Vanterpool/,
+    );
+    await hand.at('run-alarms').scrollIntoViewIfNeeded();
+    await hand.shoots('alarms-of-run');
   });
 
   chapter('work that was given up is shown to owners, who have it tried again', async () => {

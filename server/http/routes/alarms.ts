@@ -14,6 +14,8 @@ import { decodeCursor, pageFrom } from '../paging';
 import { notFound, ProblemError } from '../problem-error';
 import { mount, type Membership, type SignedIn } from '../route-context';
 import type { Services } from '../services';
+import { alarmsOfRun } from '../run-alarms';
+import { loadRun } from '../run-view';
 import { subjectOfLimit } from '../work/channel-conditions';
 
 const dayMs = 86_400_000;
@@ -124,6 +126,12 @@ const acting = [
   mount(contracts.returnAlarm, (context) => act(context, { type: 'return-to-service' })),
 ];
 
+const ofRuns = [
+  mount(contracts.listRunAlarms, async ({ params, membership, services }) => ({
+    items: await alarmsOfRun(services, await loadRun(services, membership.labId, params.runId)),
+  })),
+];
+
 const limitViewOf = ({ id, channelId, channelName, unit, limit, changedAt, changedBy }: LimitRecord): ChannelLimitView => ({
   ...{ id, channelId, channelName, unit, limit, changedBy },
   changedAt: isoOf(changedAt),
@@ -168,4 +176,4 @@ const limits = [
   }),
 ];
 
-export const alarmRoutes = [...reading, ...acting, ...limits];
+export const alarmRoutes = [...reading, ...ofRuns, ...acting, ...limits];

@@ -134,6 +134,7 @@ export const rows: Readonly<Record<string, Row>> = {
   listSteps: { params: run, allowed: 200 },
   stepsCsv: { params: run, allowed: 200 },
   listEvents: { params: run, allowed: 200 },
+  listRunAlarms: { params: run, allowed: 200 },
   downloadArchive: { params: run, allowed: 200 },
   listSchedules: { params: lab, allowed: 200 },
   makeSchedule: {

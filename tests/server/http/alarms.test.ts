@@ -3,7 +3,7 @@ import { sendSigns } from '@/server/http/work/signs-of-life';
 import { enqueueJob } from '@/server/store/jobs';
 import { verifyChain } from '@/shared/archive/chain';
 import { auditLinks } from '@/server/store/audit';
-import type { AlarmHopView, AlarmView } from '@/shared/contracts/alarms';
+import type { AlarmHopView, AlarmView, RunAlarm } from '@/shared/contracts/alarms';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol, sha256 } from '@/tests/support/lab-server';
 import { outsideWorld } from './outside-world';
@@ -132,6 +132,14 @@ test('the hold that follows from it does not ring beside it, and both end with w
   ]);
   const counts = await lab.as('viewer', 'GET', path('/alarm-counts')).expect(200);
   expect(counts.body.items).toEqual([{ code: 'interlock', title: 'Interlock or door opened', priority: 'high', count: 1 }]);
+  const ofRun = await lab.as('viewer', 'GET', path(`/runs/${run?.id ?? ''}/alarms`)).expect(200);
+  const [alarm] = ofRun.body.items as RunAlarm[];
+  expect(ofRun.body.items).toHaveLength(1);
+  expect(alarm).toMatchObject({
+    ...{ code: 'interlock', title: 'Interlock or door opened', rigName: 'North bench', seen: { by: 'Tam Ferrowdale' } },
+    ...{ told: ['Casimir Thornquist', 'Ilse Marrowby', 'Tam Ferrowdale'], done: null, aside: null },
+  });
+  expect(Date.parse(alarm?.untilAt ?? '')).toBeGreaterThan(Date.parse(alarm?.seen?.at ?? ''));
 }, 60_000);
 
 test('a limit of a channel rings nobody, it is told; shelved it is quiet, and for too long it cannot be', async () => {
