@@ -4,6 +4,7 @@ import { Appearance } from './appearance';
 import { GivenUpJobs } from './given-up-jobs';
 import { LabSettings } from './lab-settings';
 import { AlarmsLink } from './alarms-link';
+import { AuditLink } from './audit-link';
 import { Members } from './members';
 import { OnCall } from './on-call';
 import { OwnCall } from './own-call';
@@ -28,6 +29,7 @@ export function LabScreen() {
       <Appearance />
       <LabSettings />
       <AlarmsLink />
+      <AuditLink />
       <OnCall />
       <OwnCall />
       <Watcher />

@@ -13,7 +13,7 @@ export function RunAlarms({ runId, startedAt, rehearsal }: { runId: string; star
   const items = query.data?.data.items;
   if (items === undefined) return null;
   return (
-    <Section title="Alarms" remark={items.length === 0 ? '' : 'Of this run, its rig and the lab while it went on.'}>
+    <Section title="Alarms" {...(items.length === 0 ? {} : { remark: 'Of this run, its rig and the lab while it went on.' })}>
       <Panel className="py-1" testID="run-alarms">
         {items.length === 0 ? <Body className="py-2">No alarm was raised.</Body> : null}
         {items.map((alarm) => (

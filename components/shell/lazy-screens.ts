@@ -29,6 +29,7 @@ const screen = (name: keyof Screens): ComponentType =>
 export const AlarmBar = screen('AlarmBar');
 export const AlarmScreen = screen('AlarmScreen');
 export const AlarmsScreen = screen('AlarmsScreen');
+export const AuditScreen = screen('AuditScreen');
 export const CalendarScreen = screen('CalendarScreen');
 export const DataScreen = screen('DataScreen');
 export const DoorScreen = screen('DoorScreen');

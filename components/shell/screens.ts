@@ -1,6 +1,7 @@
 export { AlarmBar } from '@/components/alarms/alarm-bar';
 export { AlarmScreen } from '@/components/alarms/alarm-screen';
 export { AlarmsScreen } from '@/components/alarms/alarms-screen';
+export { AuditScreen } from '@/components/audit/audit-screen';
 export { CalendarScreen } from '@/components/calendar/calendar-screen';
 export { DataScreen } from '@/components/data/data-screen';
 export { ImportScreen } from '@/components/data/import-screen';

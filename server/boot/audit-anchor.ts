@@ -1,8 +1,9 @@
-import { appendFile } from 'node:fs/promises';
+import { appendFile, readFile } from 'node:fs/promises';
 import { join } from 'node:path';
 import * as z from 'zod';
 import type { Database } from '../store/database';
 import { auditHeads } from '../store/audit';
+import type { KnownHead } from '../store/audit-chain';
 
 /**
  * Where each audit chain ended is written down day by day in a file beside the database: whoever may rewrite the database, and its chain
@@ -12,7 +13,6 @@ import { auditHeads } from '../store/audit';
 export const headsFileName = 'audit-heads.jsonl';
 
 const headSchema = z.object({ at: z.string(), labId: z.string(), seq: z.number().int().positive(), hash: z.string() });
-export type KnownHead = z.infer<typeof headSchema>;
 
 /** Adds the present head of every lab, a line each. */
 export async function anchorAudit(db: Database, { stateDir, nowUtcMs }: { stateDir: string; nowUtcMs: number }): Promise<void> {
@@ -31,4 +31,14 @@ export function readHeads(text: string): KnownHead[] {
       return [];
     }
   });
+}
+
+/** What was written down so far; nothing where there is no file yet. */
+export async function knownHeads(stateDir: string): Promise<KnownHead[]> {
+  try {
+    return readHeads(await readFile(join(stateDir, headsFileName), 'utf8'));
+  } catch (error) {
+    if ((error as NodeJS.ErrnoException).code === 'ENOENT') return [];
+    throw error;
+  }
 }

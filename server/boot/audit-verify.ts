@@ -1,16 +1,12 @@
-import { readFileSync } from 'node:fs';
-import { join } from 'node:path';
 import { connect } from '@/db/connect';
-import { emptyChain, verifyChain, type ChainHead } from '@/shared/archive/chain';
 import { sha256Hex } from '../evaluation/sha256';
-import { auditHeads, auditLinks } from '../store/audit';
+import { auditHeads } from '../store/audit';
+import { followAudit, type KnownHead } from '../store/audit-chain';
 import type { Database } from '../store/database';
-import { headsFileName, readHeads, type KnownHead } from './audit-anchor';
+import { knownHeads } from './audit-anchor';
 import { ConfigError, readConfig } from './config';
 
 /** `npm run -s audit-verify`: follows the audit chain of every lab from its first entry to its last. No server is needed, it may run meanwhile. */
-
-const pageSize = 5_000;
 
 export interface LabAudit {
   labId: string;
@@ -31,28 +27,12 @@ export async function verifyLabAudit(
   lab: { labId: string; name: string },
   known: readonly KnownHead[] = [],
 ): Promise<LabAudit> {
-  let head: ChainHead = emptyChain;
-  const result = (brokenSeq: number | null, why: string | null): LabAudit => ({
-    ...{ labId: lab.labId, name: lab.name, entries: brokenSeq === null ? head.seq : brokenSeq - 1 },
-    ...{ head: brokenSeq === null && head.seq > 0 ? head.hash : null, valid: brokenSeq === null, brokenSeq, why },
-  });
-  const awaited = known.filter(({ labId }) => labId === lab.labId).sort((one, other) => one.seq - other.seq);
-  for (;;) {
-    const links = await auditLinks(db, { labId: lab.labId, afterSeq: head.seq, limit: pageSize });
-    const check = verifyChain(links, sha256Hex, head);
-    if (!check.valid) return result(check.seq, check.why);
-    for (const { at, seq, hash } of awaited)
-      if (links.some((link) => link.seq === seq && link.hash !== hash))
-        return result(seq, `entry ${String(seq)} had another hash on ${at}: what comes before it was written anew`);
-    if (links.length === 0) break;
-    head = check.head;
-  }
-  const cut = awaited.find(({ seq }) => seq > head.seq);
-  if (cut === undefined) return result(null, null);
-  return result(
-    head.seq + 1,
-    `the chain ended at entry ${String(cut.seq)} on ${cut.at} and now ends at ${String(head.seq)}: its end was cut off`,
-  );
+  const { head, broken } = await followAudit(db, { labId: lab.labId, sha256: sha256Hex, known });
+  return {
+    ...{ labId: lab.labId, name: lab.name, entries: broken === null ? head.seq : broken.seq - 1 },
+    ...{ head: broken === null && head.seq > 0 ? head.hash : null, valid: broken === null },
+    ...{ brokenSeq: broken?.seq ?? null, why: broken?.why ?? null },
+  };
 }
 
 interface Output {
@@ -62,22 +42,13 @@ interface Output {
 
 const toProcess: Output = { out: (text) => process.stdout.write(text), err: (text) => process.stderr.write(text) };
 
-function headsOf(stateDir: string): KnownHead[] {
-  try {
-    return readHeads(readFileSync(join(stateDir, headsFileName), 'utf8'));
-  } catch (error) {
-    if ((error as NodeJS.ErrnoException).code === 'ENOENT') return [];
-    throw error;
-  }
-}
-
 /** The command: one JSON object on `out`; 0 where all chains are whole, else 2 and on `err` a sentence for each that is not. */
 export async function main(environment: Record<string, string | undefined>, output: Output = toProcess): Promise<number> {
   try {
     const { databaseUrl, stateDir } = readConfig(environment);
     const connection = connect({ url: databaseUrl, maxConnections: 1, statementTimeoutMs: 60_000 });
     try {
-      const known = headsOf(stateDir);
+      const known = await knownHeads(stateDir);
       const labs: LabAudit[] = [];
       for (const lab of await auditHeads(connection.db)) labs.push(await verifyLabAudit(connection.db, lab, known));
       output.out(`${JSON.stringify({ valid: labs.every(({ valid }) => valid), labs }, null, 2)}\n`);

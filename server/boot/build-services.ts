@@ -35,6 +35,7 @@ import { buildAcross, createPost, type Across } from './build-across';
 import type { BuildParts } from './build-parts';
 import { buildRigSide, type RigSide } from './build-rigs';
 import { createLog } from './create-log';
+import { knownHeads } from './audit-anchor';
 import { freeBytesAt, freeDisk } from './free-disk';
 import { JobCrew } from './job-crew';
 import { RigTaking } from './take-rigs';
@@ -100,6 +101,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     background: (work, what) => background.add(work, what),
     takenUp: takenUp.promise,
     databaseAwaySinceUtcMs: () => awaySinceUtcMs,
+    knownAuditHeads: () => knownHeads(config.stateDir),
     freeBytes: overrides.freeBytes ?? (() => freeBytesAt(config.stateDir)),
     breathe: () => new Promise((resolve) => setImmediate(resolve)),
     pokeJobs: () => (crew.poke(), told.jobsQueued()),

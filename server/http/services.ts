@@ -19,6 +19,7 @@ import type { ChannelFacts } from '../ingest/recent-samples';
 import type { SampleBatch, SampleStore } from '../interfaces/sample-store';
 import type { ServerConfig } from '../interfaces/server-config';
 import type { SessionPort } from '../interfaces/sessions';
+import type { KnownHead } from '../store/audit-chain';
 import type { Connection } from '../store/database';
 import type { AccessDirectory } from './access-directory';
 import type { ActiveRuns } from './active-runs';
@@ -85,6 +86,8 @@ export interface Services {
   databaseAwaySinceUtcMs(): number | null;
   /** Bytes free for this server on the disk of its state folder; null: the system does not tell. */
   freeBytes(): Promise<number | null>;
+  /** Where the audit chains ended on earlier days, as written down beside the database. */
+  knownAuditHeads(): Promise<KnownHead[]>;
   /** Lets everything else have a turn: long work calls it between its parts, so that hold and stop never wait for it. */
   breathe(): Promise<void>;
   /** Tells the workers that a job was queued, so that it need not wait for their next look. */

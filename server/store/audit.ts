@@ -1,4 +1,4 @@
-import { and, asc, desc, eq, gt, lt, sql } from 'drizzle-orm';
+import { and, asc, desc, eq, gt, like, lt, or, sql } from 'drizzle-orm';
 import { audit, labs } from '@/db/schema';
 import { appendEvent, emptyChain, type ChainHead, type Sha256 } from '@/shared/archive/chain';
 import type { ChainedEvent } from '@/shared/archive/run-records';
@@ -69,13 +69,36 @@ export async function auditHeads(db: Handle): Promise<{ labId: string; name: str
   return rows.map(({ labId, name, seq, hash }) => ({ labId, name, head: seq === null || hash === null ? emptyChain : { seq, hash } }));
 }
 
+export interface AuditPage {
+  labId: string;
+  beforeSeq: number | null;
+  limit: number;
+  /** Account; null for the server itself. */
+  whoId?: string | null | undefined;
+  /** One kind, or the part before its point. */
+  kind?: string | undefined;
+  fromUtcMs?: number | undefined;
+  /** Exclusive. */
+  untilUtcMs?: number | undefined;
+}
+
 /** Entries of a lab, newest first, from before `beforeSeq` on. */
-export function auditPage(db: Handle, page: { labId: string; beforeSeq: number | null; limit: number }): Promise<AuditRow[]> {
-  const own = eq(audit.labId, page.labId);
+export function auditPage(db: Handle, { labId, beforeSeq, limit, whoId, kind, fromUtcMs, untilUtcMs }: AuditPage): Promise<AuditRow[]> {
+  const at = sql`${audit.at} collate "C"`;
   return db
     .select()
     .from(audit)
-    .where(page.beforeSeq === null ? own : and(own, lt(audit.seq, page.beforeSeq)))
+    .where(
+      and(
+        eq(audit.labId, labId),
+        beforeSeq === null ? undefined : lt(audit.seq, beforeSeq),
+        kind === undefined ? undefined : or(eq(audit.kind, kind), like(audit.kind, `${kind}.%`)),
+        // By its text, for a value of JSON may hold what no text of PostgreSQL can. Within a string its quotes would be escaped.
+        whoId === undefined ? undefined : sql`${audit.data}::text like ${`%"who":{"id":${JSON.stringify(whoId)},"name":%`}`,
+        fromUtcMs === undefined ? undefined : sql`${at} >= ${new Date(fromUtcMs).toISOString()}`,
+        untilUtcMs === undefined ? undefined : sql`${at} < ${new Date(untilUtcMs).toISOString()}`,
+      ),
+    )
     .orderBy(desc(audit.seq))
-    .limit(page.limit);
+    .limit(limit);
 }

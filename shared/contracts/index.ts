@@ -1,4 +1,5 @@
 import * as alarms from './alarms';
+import * as audit from './audit';
 import * as calls from './calls';
 import * as data from './data';
 import * as devices from './devices';
@@ -24,6 +25,7 @@ const isRoute = (value: unknown): value is RouteContract =>
 export const routes: readonly RouteContract[] = [
   service,
   people,
+  audit,
   rigs,
   standing,
   link,

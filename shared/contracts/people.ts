@@ -1,5 +1,5 @@
 import * as z from 'zod';
-import { idSchema, instantSchema, pageOf, pageQuerySchema } from './common';
+import { idSchema, instantSchema } from './common';
 import { roles } from './roles';
 import { defineRoute } from './route';
 
@@ -181,24 +181,5 @@ export const changeLab = defineRoute({
   status: 200,
   body: z.strictObject({ name: z.string().min(1).max(120).optional(), timeZone: z.string().min(1).max(64).optional() }),
   response: labViewSchema,
-  problems: ['invalid-input', 'not-found'],
-});
-export const auditEntrySchema = z.strictObject({
-  seq: z.number().int(),
-  at: instantSchema,
-  who: z.string(),
-  kind: z.string(),
-  data: z.record(z.string(), z.unknown()),
-  hash: z.string(),
-});
-export const listAudit = defineRoute({
-  name: 'listAudit',
-  summary: 'The audit chain of the lab, newest first',
-  method: 'GET',
-  path: '/labs/:labId/audit',
-  access: 'members.manage',
-  status: 200,
-  query: pageQuerySchema,
-  response: pageOf(auditEntrySchema),
   problems: ['invalid-input', 'not-found'],
 });

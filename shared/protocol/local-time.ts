@@ -57,3 +57,7 @@ export function localInstants({ date, localTime, timeZone }: { date: string; loc
   const both = [at('earlier'), at('later')].filter((found) => found.toPlainDateTime().equals(local));
   return [...new Set(both.map(({ epochMilliseconds }) => epochMilliseconds))];
 }
+
+/** When a day of a zone begins, or one so many days later; also where its clocks jump over midnight. UTC ms. */
+export const dayStartUtcMs = (date: string, timeZone: string, daysLater = 0): number =>
+  Temporal.PlainDate.from(date).add({ days: daysLater }).toZonedDateTime(timeZone).epochMilliseconds;

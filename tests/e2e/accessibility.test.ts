@@ -103,6 +103,15 @@ function places(): Place[] {
     { name: 'lab', path: '/lab', arrives: 'lab-screen', first: async (hand) => void (await hand.reads('on-call', 'Whoever')) },
     { name: 'on-call', path: '/lab', arrives: 'lab-screen', first: opened('change-on-call', 'on-call-sheet') },
     { name: 'limit', path: rig, arrives: 'rig-screen', first: opened('add-limit', 'limit-sheet') },
+    {
+      name: 'audit',
+      path: '/lab/audit',
+      arrives: 'audit-screen',
+      first: async (hand) => {
+        await hand.reads('audit-check', 'whole');
+        await hand.taps(hand.at('audit-entry').getByRole('button'));
+      },
+    },
     { name: 'alarms', path: '/alarms', arrives: 'alarms-screen', first: async (hand) => void (await hand.reads('standing-alarms')) },
     { name: 'alarm', path: `/alarms/${alarmId}`, arrives: 'alarm-screen', first: opened('shelve', 'reason-sheet') },
   ];

@@ -1,6 +1,7 @@
 import type { MountedRoute } from '../route-context';
 import { alarmRoutes } from './alarms';
 import { armingRoutes } from './arming';
+import { auditRoutes } from './audit';
 import { callRoutes } from './calls';
 import { dataRoutes } from './data';
 import { deviceRoutes } from './devices';
@@ -21,6 +22,7 @@ import { workRoutes } from './work';
 export const allRoutes: readonly MountedRoute[] = [
   ...serviceRoutes,
   ...peopleRoutes,
+  ...auditRoutes,
   ...rigRoutes,
   ...armingRoutes,
   ...lineRoutes,

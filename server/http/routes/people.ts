@@ -5,7 +5,7 @@ import type { AuthParts, Wait } from '@/server/auth/auth-parts';
 import * as invitations from '@/server/auth/invitations';
 import * as resets from '@/server/auth/password-reset';
 import { signIn, signOut } from '@/server/auth/sign-in';
-import { appendAudit, auditPage, type AuditRow } from '@/server/store/audit';
+import { appendAudit } from '@/server/store/audit';
 import { openInvitations, withdrawInvitation, type Invitation } from '@/server/store/invitations';
 import { changeLab } from '@/server/store/labs';
 import { changeMember, memberOf, membersOf, membershipsOf, type Member } from '@/server/store/people';
@@ -13,7 +13,6 @@ import type { Role } from '@/shared/contracts/roles';
 import { isDatabaseAway } from '../errors';
 import { isoOf } from '../maker';
 import { originForLinks } from '../origin';
-import { decodeCursor, pageFrom } from '../paging';
 import { notFound, ProblemError } from '../problem-error';
 import { mount, type Membership, type SignedIn } from '../route-context';
 import type { Services } from '../services';
@@ -65,11 +64,6 @@ const invitationViewOf = ({ id, email, role, invitedBy, createdAt, expiresAt }: 
   expiresAt: isoOf(expiresAt),
 });
 const memberViewOf = ({ since, ...member }: Member): MemberView => ({ ...member, since: isoOf(since) });
-
-function auditEntryOf({ seq, at, kind, data, hash }: AuditRow) {
-  const who = data.who as { name?: unknown } | undefined;
-  return { seq, at, who: typeof who?.name === 'string' ? who.name : 'unknown', kind, data, hash };
-}
 
 const sessionRoutes = [
   mount(contracts.signIn, async ({ body, req, res, services, setSession }) => {
@@ -261,13 +255,6 @@ const labRoutes = [
     if (changed === null) throw notFound('lab');
     return { id: changed.id, name: changed.name, timeZone: changed.timeZone };
   }),
-
-  mount(contracts.listAudit, async ({ membership, query, services }) => {
-    const [beforeSeq] = decodeCursor(query.cursor, ['number']) ?? [null];
-    const rows = await auditPage(services.database.db, { labId: membership.labId, beforeSeq, limit: query.limit + 1 });
-    const page = pageFrom(rows, query.limit, (row) => [row.seq]);
-    return { items: page.items.map(auditEntryOf), next: page.next };
-  }),
 ];
 
 /** A named zone that this server knows; bare offsets know no daylight saving and are refused. */
@@ -281,5 +268,5 @@ function isTimeZone(name: string): boolean {
   }
 }
 
-/** Sessions, passwords, invitations, members, the lab and its audit. */
+/** Sessions, passwords, invitations, members and the lab. */
 export const peopleRoutes = [...sessionRoutes, ...invitationRoutes, ...memberRoutes, ...labRoutes];

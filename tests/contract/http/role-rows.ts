@@ -68,7 +68,8 @@ export const rows: Readonly<Record<string, Row>> = {
   withdrawInvitation: { params: ({ labId }) => ({ labId, invitationId: nobody }), allowed: 404 },
   changeMemberRole: { params: ({ labId }) => ({ labId, userId: nobody }), body: () => ({ role: 'viewer' }), allowed: 404 },
   removeMember: { params: ({ labId }) => ({ labId, userId: nobody }), allowed: 404 },
-  listAudit: { params: lab, allowed: 200 },
+  listAudit: { params: lab, query: () => ({ kind: 'run', who: nobody, from: '2031-01-01', until: '2031-12-31' }), allowed: 200 },
+  checkAudit: { params: lab, allowed: 200 },
   listRigs: { params: lab, allowed: 200 },
   createRig: {
     params: lab,

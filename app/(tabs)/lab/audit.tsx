@@ -1,0 +1,5 @@
+import { AuditScreen } from '@/components/shell/lazy-screens';
+
+export default function Audit() {
+  return <AuditScreen />;
+}
