@@ -95,13 +95,16 @@ export function whenWords(iso: string, { timeZone, nowIso }: { timeZone: string;
   return day === formatDay(Date.parse(nowIso), timeZone) ? clock : `${day} ${clock}`;
 }
 
+const unpointed = (sentence: string) => sentence.replace(/\.$/, '');
+
 /** How long an alarm of a run stood, whom it was told, who saw it and what was done, each in a few words; `when` names an instant. */
 export function runAlarmFacts({ raisedAt, untilAt, told, seen, done, aside }: RunAlarm, when: (iso: string) => string): string[] {
-  const still = aside === null ? 'still there' : `put aside ${when(aside.at)}${aside.by === '' ? '' : ` by ${aside.by}`}: ${aside.why}`;
+  const still =
+    aside === null ? 'still there' : `put aside ${when(aside.at)}${aside.by === '' ? '' : ` by ${aside.by}`}: ${unpointed(aside.why)}`;
   return [
     ...(untilAt === raisedAt ? [] : [untilAt === null ? still : `until ${when(untilAt)}`]),
     told.length === 0 ? 'nobody was told' : `told ${told.join(', ')}`,
     seen === null ? 'seen by nobody' : `seen by ${seen.by} ${when(seen.at)}`,
-    ...(done === null ? [] : [`done by ${done.by} ${when(done.at)}${done.note === '' ? '' : `: ${done.note.replace(/\.$/, '')}`}`]),
+    ...(done === null ? [] : [`done by ${done.by} ${when(done.at)}${done.note === '' ? '' : `: ${unpointed(done.note)}`}`]),
   ];
 }
