@@ -33,10 +33,21 @@ const leftWords = (dwells: number) =>
   `${String(dwells)} ${dwells === 1 ? 'dwell' : 'dwells'}, ${String(Math.floor(dwells / 2))} ${dwells >= 2 && dwells < 4 ? 'pair' : 'pairs'}`;
 const percent = (share: number | null) => (share === null ? '–' : formatPercent(share));
 
+const measuredName = 'u of near − far, measured';
+
+/** What the scatter of the good dwells says so far; the geometry has no part in it. */
+function measuredWords(reversal: RunView['reversal']): string {
+  if (reversal === null) return 'no good pair yet';
+  const { relativeU, reversals } = reversal;
+  const by = `by ${String(reversals)} ${reversals === 1 ? 'reversal' : 'reversals'}`;
+  return relativeU === null ? `too few dwells to tell, ${by}` : `${percent(relativeU)} so far, ${by}`;
+}
+
 /** The plan from here on: first move, dwells and pairs left, the finish in the lab's time, u of G as planned. */
 export function remainingFacts(review: Remaining | null, { view, timeZone, serverNowMs }: Omit<RunSheetProps, 'onClose'>): Fact[] {
+  const measured = [measuredName, measuredWords(view.reversal)] as const;
   if (review === null)
-    return ['Goes on with', 'First move', 'Left', 'Ends about', 'u of G by the plan'].map((name) => [name, '…'] as const);
+    return [...['Goes on with', 'First move', 'Left', 'Ends about', 'u of G by the plan'].map((name) => [name, '…'] as const), measured];
   const finishMs = Date.parse(review.finishAt);
   const inS = Math.max(0, (finishMs - serverNowMs) / 1000);
   const { soFar, atEnd } = review.plannedU;
@@ -47,6 +58,7 @@ export function remainingFacts(review: Remaining | null, { view, timeZone, serve
     ['Left', leftWords(review.dwellsLeft)],
     ['Ends about', `${formatClockWithZone(finishMs, { timeZone, weekday: true })}, in ${formatDuration(inS)}`],
     ['u of G by the plan', known ? `${percent(soFar)} now, ${percent(atEnd)} at the end` : 'the rig does not tell'],
+    measured,
   ];
 }
 

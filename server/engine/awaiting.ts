@@ -162,7 +162,7 @@ function close(draft: Draft, at: Instant): void {
   const { row } = draft.step;
   draft.closeRow({ at, angleDeg: row.angleStartDeg, outcome: 'done' });
   draft.standAt(at, context.moment.angleDeg);
-  Object.assign(context, { waiting: null, step: null, onCadence: false, swingStartUtcMs: null });
+  Object.assign(context, { waiting: null, step: null, onCadence: false, swingStartUtcMs: null, swungFromDeg: null });
 }
 
 export const awaits = (step: ActiveStep | null): boolean => step?.awaits === true;

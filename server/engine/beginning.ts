@@ -36,6 +36,8 @@ export function newContext(start: RunStart, nowUtcMs: number): RunContext {
     moment: { utcMs: nowUtcMs, uS: 0, angleDeg: start.rig.motion?.homeDeg ?? 0 },
     onCadence: false,
     swingStartUtcMs: null,
+    swungFromDeg: null,
+    heldForDwell: null,
     pair: noPair,
     holdAfterStep: null,
     intervention: null,

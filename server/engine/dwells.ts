@@ -12,7 +12,9 @@ export function lookAtDwell(draft: Draft, toUtcMs: number): void {
   const { context } = draft;
   const { row } = draft.step;
   context.judging = row.seq;
-  draft.look({ kind: 'dwell', seq: row.seq, fromUtcMs: row.startUtcMs, toUtcMs, angleDeg: context.moment.angleDeg });
+  const { swungFromDeg, dwells, moment } = context;
+  const before = dwells.findLast(({ seq }) => seq < row.seq) ?? null;
+  draft.look({ kind: 'dwell', seq: row.seq, fromUtcMs: row.startUtcMs, toUtcMs, angleDeg: moment.angleDeg, swungFromDeg, before });
 }
 
 /** Taken down only before the next move is sent: from then on it is decided whether another pass begins. */
@@ -21,6 +23,22 @@ export function noteDwellLook(draft: Draft): void {
   const { context } = draft;
   if (finding?.kind !== 'dwell' || context.ahead !== null || finding.facts.seq !== context.step?.row.seq) return;
   context.dwells = [...context.dwells.filter(({ seq }) => seq !== finding.facts.seq), finding.facts].slice(-MOST_DWELLS);
+}
+
+/** So many dwells without deflection, one after the other, and the run holds: what follows would be lost as well. */
+const MOST_SILENT = 2;
+
+/** Why the dwells that ended last ask for a hold; null where they do not, or where a person has resumed since. */
+export function holdOfDwells({ context }: Draft): { code: string; text: string; seq: number } | null {
+  const since = context.dwells.filter(({ seq }) => seq > (context.heldForDwell ?? 0));
+  const last = since.at(-1);
+  if (last === undefined) return null;
+  if (last.noResponse !== null)
+    return { code: 'no-response', seq: last.seq, text: `In the dwell of row ${last.seq} ${last.noResponse}. It may touch, or be caged.` };
+  const silent = since.slice(-MOST_SILENT);
+  if (silent.length < MOST_SILENT || !silent.every((dwell) => dwell.silent)) return null;
+  const text = `The deflection was silent in ${MOST_SILENT} dwells one after the other. Look at laser, camera and the computer that records, then resume.`;
+  return { code: 'no-deflection', seq: last.seq, text };
 }
 
 /** The moment at which the cursor goes on: now, or at the end of the present dwell. */

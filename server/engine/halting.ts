@@ -243,6 +243,7 @@ function resumeStep(draft: Draft): void {
   draft.standAt(draft.event.at, draft.controller.angleDeg ?? context.moment.angleDeg);
   context.ahead = null;
   context.moveRetries = 0;
+  context.swungFromDeg = null;
   if (context.startedAtUtcMs === null) return startRun(draft);
   if (step === null || !step.broken) return chooseNext(draft);
   if (step.row.kind === 'home') return beginHome(draft, step.item);

@@ -1,4 +1,4 @@
-import { judgeDwell, type DwellFacts } from '@/shared/conditions/dwell-verdict';
+import { judgeDwell, type DwellFacts, type DwellLook } from '@/shared/conditions/dwell-verdict';
 import { lookAtWait, type WaitFinding } from '@/shared/conditions/wait-condition';
 import type { RunStart } from '@/shared/archive/run-records';
 import type { Step } from '@/shared/protocol/document';
@@ -9,7 +9,7 @@ import type { RunEvent } from './run-context';
 
 /** What the chart asks to be looked up in the samples; the driver answers with `looked`. */
 export type Look =
-  | { kind: 'dwell'; seq: number; fromUtcMs: number; toUtcMs: number; angleDeg: number }
+  | ({ kind: 'dwell' } & Pick<DwellLook, 'seq' | 'fromUtcMs' | 'toUtcMs' | 'angleDeg' | 'swungFromDeg' | 'before'>)
   | { kind: 'wait'; seq: number; step: Step; fromUtcMs: number; angleDeg: number };
 
 export type Finding =
@@ -34,12 +34,14 @@ interface Eyes {
 
 function dwellFinding(start: RunStart, look: Look & { kind: 'dwell' }, { reader, nowUtcMs, deflection }: Eyes): Finding | null {
   const { rig, protocol, simulated } = start;
-  const { seq, fromUtcMs, toUtcMs, angleDeg } = look;
+  const { kind: _, ...asked } = look;
+  const { fromUtcMs, toUtcMs } = asked;
   const window = { fromUtcMs, toUtcMs };
   const series = deflection === null ? null : reader.read(deflection, window);
   if (series === null && protocol.goodWhen?.channels === undefined) return null;
   const facts = judgeDwell({
-    ...{ rig, goodWhen: protocol.goodWhen, seq, fromUtcMs, toUtcMs, angleDeg, nowUtcMs, deflection: series },
+    ...asked,
+    ...{ rig, goodWhen: protocol.goodWhen, nowUtcMs, deflection: series },
     channel: (name) => reader.read(name, window),
     simulated: simulated !== null,
   });

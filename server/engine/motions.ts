@@ -1,5 +1,6 @@
 import type { StepOutcome, StepRow } from '@/shared/archive/run-records';
 import { advanceCursor } from '@/shared/protocol/cursor';
+import type { Step } from '@/shared/protocol/document';
 import { swingMove } from '@/shared/protocol/durations';
 import type { Instant } from '../interfaces/clock';
 import type { MotionSent } from '../interfaces/turntable-link';
@@ -146,7 +147,11 @@ export function finishMotion(draft: Draft): void {
   draft.standAt(at, row.angleEndDeg ?? moment.angleDeg);
   draft.context.station = row.station;
   draft.context.onCadence = false;
+  draft.context.swungFromDeg = isPlain(draft.step.item.step) && outcome === 'done' ? row.angleStartDeg : null;
 }
+
+/** A shaped swing leaves the pendulum nearly at rest on purpose. */
+const isPlain = (step: Step): boolean => step.kind === 'swing' && step.profile !== 'shaped';
 
 /** Whether the motion reached what it was sent to: the controller said so, or the sources stand there. */
 export function reachedTarget(draft: Draft): boolean {

@@ -18,7 +18,7 @@ import type { OpenPair } from './pairs';
  * Raised whenever the shape or meaning of the stored context changes; `stored-snapshot.ts` brings older ones up to it, and versions that
  * it does not know are quarantined.
  */
-export const CHART_VERSION = 5;
+export const CHART_VERSION = 6;
 
 export type ChartState =
   | 'starting'
@@ -179,6 +179,10 @@ export interface RunContext {
   onCadence: boolean;
   /** Start of the swing before, from which a beat is counted; null when no swing came before or it was broken. */
   swingStartUtcMs: number | null;
+  /** Where a plain swing began that was made in its time and that the present dwell directly follows; null where there is none. */
+  swungFromDeg: number | null;
+  /** The dwell for which the run was held by itself last: those up to it ask for no hold any more. */
+  heldForDwell: number | null;
   /** The pair that the dwells so far have left open. */
   pair: OpenPair;
   /** Set by `hold after this dwell`. */

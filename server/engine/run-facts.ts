@@ -1,4 +1,5 @@
 import type { RunStart, StepRow } from '@/shared/archive/run-records';
+import type { DwellFacts } from '@/shared/conditions/dwell-verdict';
 import { reversalSoFar, type ReversalSoFar } from '@/shared/conditions/relative-u';
 import type { RunState } from '@/shared/contracts/runs';
 import { planTimeline } from '@/shared/protocol/timeline';
@@ -31,6 +32,8 @@ export interface RunFacts {
   waiting: WaitingFacts | null;
   /** Near minus far so far; null before there is a reversal. */
   reversal: ReversalSoFar | null;
+  /** That the dwell judged last was noisier than an ordinary night's; null where it was not. */
+  loud: DwellFacts['loud'];
   /** What proves the counted angle; null where nothing was kept. */
   position: KnownPosition | null;
   intervention: { kind: InterventionKind; by: string; serverAtUtcMs: number; confirmedAtUtcMs: number | null } | null;
@@ -146,6 +149,7 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, pre
     dwellsGood: context.dwellsGood,
     waiting: waitingFacts(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy }),
     reversal: reversalSoFar(context.dwells),
+    loud: context.dwells.at(-1)?.loud ?? null,
     position: context.position,
     intervention:
       intervention === null

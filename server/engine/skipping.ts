@@ -53,6 +53,7 @@ export function skip(draft: Draft): void {
     haltedAtUtcMs: null,
     onCadence: false,
     swingStartUtcMs: null,
+    swungFromDeg: null,
   });
   context.intervention = { kind: 'skip', by, serverAtUtcMs: draft.nowUtcMs, confirmedAtUtcMs: null, commandId: null };
   chooseNext(draft);

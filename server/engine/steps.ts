@@ -18,7 +18,7 @@ import { waitOf } from '@/shared/protocol/wait';
 import type { RigMotion } from '@/shared/rig/document';
 import type { Instant } from '../interfaces/clock';
 import { beginAwaiting } from './awaiting';
-import { cursorMoment, lookAtDwell } from './dwells';
+import { cursorMoment, holdOfDwells, lookAtDwell } from './dwells';
 import type { Draft } from './draft';
 import { runProof } from './proofs';
 import { newRow, stationOf, toleranceDeg } from './rows';
@@ -81,6 +81,12 @@ function holdIsDue(draft: Draft): boolean {
   const { holdAfterStep, moment } = draft.context;
   if (holdAfterStep !== null) {
     draft.because('hold-after-dwell', `${holdAfterStep} asked to hold when the step had ended.`);
+    return true;
+  }
+  const asked = holdOfDwells(draft);
+  if (asked !== null) {
+    draft.context.heldForDwell = asked.seq;
+    draft.because(asked.code, asked.text);
     return true;
   }
   if (!armHasEnded(draft, moment.utcMs)) return false;
@@ -277,8 +283,7 @@ export function endStanding(draft: Draft): void {
   const at: Instant = { utcMs: standingEndUtcMs(step), uS: uPlanS };
   draft.closeRow({ at, angleDeg: step.row.angleStartDeg, outcome: 'done' });
   draft.standAt(at, moment.angleDeg);
-  draft.context.onCadence = true;
-  draft.context.swingStartUtcMs = null;
+  Object.assign(draft.context, { onCadence: true, swingStartUtcMs: null, swungFromDeg: null });
 }
 
 /**
@@ -292,7 +297,8 @@ export function sendAhead(draft: Draft): void {
   const endUtcMs = standingEndUtcMs(step);
   context.deadlineUtcMs = endUtcMs;
   if (endUtcMs - draft.nowUtcMs < LEAST_LEAD_MS || context.moveRetries > 0) return;
-  if (context.holdAfterStep !== null || armHasEnded(draft, endUtcMs) || !draft.controller.positionKnown) return;
+  if (context.holdAfterStep !== null || holdOfDwells(draft) !== null || armHasEnded(draft, endUtcMs) || !draft.controller.positionKnown)
+    return;
   const swing = peekSwing(draft, endUtcMs);
   if (swing === null) return;
   const move = swingMove(swing, draft.start.rig, context.moment.angleDeg);

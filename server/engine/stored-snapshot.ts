@@ -19,10 +19,22 @@ export const isOwn = (effect: Effect): effect is OwnEffect => effect.kind !== 'l
 /**
  * Contexts of version 1 tell nothing of passes of the home edge: the count is unproved until the next one. Those of version 2 were never
  * written while the database was away. Those of version 3 do not tell which dwells make a pair: the next one begins one. Before version 5 no
- * dwell was judged and nothing was waited for.
+ * dwell was judged and nothing was waited for. Before version 6 it was not looked whether the pendulum answers a swing, and silence held no run.
  */
-type Newer = 'position' | 'databaseAwaySinceUtcMs' | 'pair' | 'dwellsGood' | 'dwells' | 'judging' | 'dwellJustNotGood' | 'waiting';
+type Newer =
+  | 'swungFromDeg'
+  | 'heldForDwell'
+  | 'position'
+  | 'databaseAwaySinceUtcMs'
+  | 'pair'
+  | 'dwellsGood'
+  | 'dwells'
+  | 'judging'
+  | 'dwellJustNotGood'
+  | 'waiting';
 type OldContext = Omit<RunContext, Newer> & Partial<Pick<RunContext, Newer>>;
+
+const unjudged = { silent: false, noResponse: null, loud: null };
 
 /** A snapshot of this or an older version in the shape of this one; null where this version cannot read it. */
 export function restored(snapshot: unknown, chartVersion: number): RunSnapshot | null {
@@ -30,9 +42,10 @@ export function restored(snapshot: unknown, chartVersion: number): RunSnapshot |
   const { state, context } = snapshot as Omit<RunSnapshot, 'context'> & { context: OldContext };
   const newer = {
     ...{ position: nothingKnown, databaseAwaySinceUtcMs: null, pair: noPair, dwellsGood: context.dwellsDone },
-    ...{ dwells: [], judging: null, dwellJustNotGood: false, waiting: null },
+    ...{ judging: null, dwellJustNotGood: false, waiting: null, swungFromDeg: null, heldForDwell: null },
   };
-  return { version: CHART_VERSION, state, context: { ...newer, ...context } };
+  const dwells = (context.dwells ?? []).map((dwell) => ({ ...unjudged, ...dwell }));
+  return { version: CHART_VERSION, state, context: { ...newer, ...context, dwells } };
 }
 
 /** @throws Error when the store holds a snapshot of another version: the supervisor quarantines such runs before. */

@@ -142,6 +142,7 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
     dwellsGood: steps.filter((step) => step.kind === 'dwell' && step.outcome === 'done' && step.good !== false).length,
     waiting: null,
     reversal: null,
+    loud: null,
     position: null,
     intervention: null,
     mayResume: notDriven,

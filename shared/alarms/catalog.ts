@@ -90,6 +90,20 @@ const kinds = {
     consequence: 'The run is held; without an answer the night is lost.',
     answer: 'Look at the figures of the proof. A caged pendulum, a wrong side or a blocked beam can be put right at the rig.',
   },
+  'no-response': {
+    ...always,
+    title: 'Pendulum does not answer',
+    cause: 'After a swing the pendulum neither swung at its own period nor about another place.',
+    consequence: 'It may touch or be caged. The run is held; what is measured meanwhile is worth nothing.',
+    answer: 'Look at strip and spot. A pendulum that touches has to be freed at the rig: hold the run until somebody is there.',
+  },
+  'no-deflection': {
+    ...always,
+    title: 'Held without deflection',
+    cause: 'The deflection was silent in two dwells one after the other.',
+    consequence: 'The run is held; without an answer the rest of the night is lost.',
+    answer: 'Bring laser, camera or the computer that records back to work, from afar or at the rig, then resume.',
+  },
   'home-edge': {
     ...always,
     title: 'Home edge off',
@@ -112,7 +126,19 @@ const kinds = {
     cause: 'The run came to rest and does not go on by itself.',
     consequence: 'No dwell is measured until somebody resumes.',
     answer: 'Read why, put it right, and resume from the run screen; or leave it held until the morning.',
-    followsFrom: [...['unexpected-motion', 'limit', 'interlock', 'supply', 'controller-reset', 'proof-failed', 'home-edge']],
+    followsFrom: [
+      ...[
+        'unexpected-motion',
+        'limit',
+        'interlock',
+        'supply',
+        'controller-reset',
+        'proof-failed',
+        'home-edge',
+        'no-response',
+        'no-deflection',
+      ],
+    ],
   },
   'ended-early': {
     ...always,
@@ -147,6 +173,13 @@ const kinds = {
     cause: 'The deflection channel has had no sample for over a minute during a run.',
     consequence: 'Dwells without data are not good and are made up, as far as the protocol allows.',
     answer: 'Look at the laser, the camera and the computer that records.',
+  },
+  'residual-high': {
+    ...morning,
+    title: 'Pendulum is unquiet',
+    cause: 'The noise about the fit of the last dwell was beyond the limit of the protocol, or three times that of the rig document.',
+    consequence: 'Such dwells say less. They are made up where the protocol sets a limit and counts good ones.',
+    answer: 'Traffic, a door, wind or a distant earthquake: look at the strip, and note what it was.',
   },
   'channel-level': {
     ...morning,
@@ -241,26 +274,6 @@ export type AlarmCode = keyof typeof kinds;
 export const alarmKinds: Readonly<Record<AlarmCode, AlarmKind>> = kinds;
 export const alarmCodes = Object.keys(kinds) as AlarmCode[];
 export const isAlarmCode = (code: string): code is AlarmCode => code in kinds;
-
-/** Codes of a run's reason that are the alarm of the same name; any other reason of a hold is `held`, and a person's own hold is none. */
-const byReason: Readonly<Record<string, AlarmCode>> = {
-  'unexpected-motion': 'unexpected-motion',
-  'stopped-at-rig': 'unexpected-motion',
-  limit: 'limit',
-  interlock: 'interlock',
-  supply: 'supply',
-  'controller-reset': 'controller-reset',
-  'table-slipped': 'home-edge',
-  'slip-found-homing': 'home-edge',
-};
-const byPeople = ['held-by-person', 'stopped-by-person', 'hold-after-dwell'];
-
-/** The alarm that a hold for this reason is; null where a person asked for it. */
-export function alarmOfHold(reasonCode: string): AlarmCode | null {
-  if (byPeople.includes(reasonCode)) return null;
-  if (reasonCode.startsWith('proof')) return 'proof-failed';
-  return byReason[reasonCode] ?? 'held';
-}
 
 const nearEnoughMs = 3 * 3_600_000;
 

@@ -1,5 +1,6 @@
 import type { ProtocolDocument } from '../protocol/document';
 import { sideAt } from '../protocol/stations';
+import { pendulumOf, predictEquilibriumRad } from '../protocol/predict';
 import type { RigDocument } from '../rig/document';
 import { channelReadings } from './channel-condition';
 import { fitFreeSwing, LEAVES_FIT_RAD, type FreeSwing } from './free-swing';
@@ -20,6 +21,12 @@ export interface DwellFacts {
   good: boolean;
   /** One sentence for each thing that makes it not good. */
   why: string[];
+  /** Its deflection was silent for so long that it is not good. */
+  silent: boolean;
+  /** In a sentence, that the pendulum did not answer the swing before it; null where it did, or where that cannot be told. */
+  noResponse: string | null;
+  /** Noise about the fit that is too much for an ordinary night, and since when, UTC ms; null where it is not. */
+  loud: { words: string; sinceUtcMs: number } | null;
 }
 
 export interface DwellLook {
@@ -30,6 +37,10 @@ export interface DwellLook {
   /** Planned end. */
   toUtcMs: number;
   angleDeg: number;
+  /** Where the plain swing that it directly follows began; null where there was none, or one that was broken. */
+  swungFromDeg: number | null;
+  /** The dwell before that swing, as far as it was judged. */
+  before: Pick<DwellFacts, 'centreRad'> | null;
   /** When it is looked at: what has not come by then cannot be judged. */
   nowUtcMs: number;
   /** Null where the rig has no live deflection: then the data come later, and nothing is said against the dwell. */
@@ -51,7 +62,8 @@ const BATCH_S = 12;
 export function judgeDwell(look: DwellLook): DwellFacts {
   const { rig, seq, fromUtcMs, toUtcMs, angleDeg } = look;
   const swing = fitFreeSwing(rig, look.deflection, { fromUtcMs, toUtcMs, angleDeg });
-  const why = [...silence(look), ...disturbance(swing), ...residual(look, swing), ...surroundings(look)];
+  const silent = silence(look);
+  const why = [...silent, ...disturbance(swing), ...residual(look, swing), ...surroundings(look)];
   return {
     seq,
     side: sideAt(rig, angleDeg),
@@ -61,6 +73,9 @@ export function judgeDwell(look: DwellLook): DwellFacts {
     period: swing?.period ?? null,
     good: why.length === 0,
     why,
+    silent: silent.length > 0,
+    noResponse: noResponse(look, swing),
+    loud: loud(look, swing),
   };
 }
 
@@ -105,6 +120,45 @@ function residual({ goodWhen }: DwellLook, swing: FreeSwing | null): string[] {
   if (limit === undefined || swing === null) return [];
   const found = 1e6 * swing.residualRad;
   return found <= limit ? [] : [`residual ${found.toPrecision(2)} µrad, more than ${limit} µrad`];
+}
+
+/** As in the proof of the first pair: noise about the fit beyond so many times that of the rig document is worth a look. */
+const USUAL_RATIO = 3;
+
+/** Against the protocol's own limit, or else against the noise that the rig document tells. */
+function loud({ goodWhen, rig, fromUtcMs }: DwellLook, swing: FreeSwing | null): DwellFacts['loud'] {
+  const noise = rig.noise?.readout_rad ?? 0;
+  const limitRad = goodWhen?.residual_urad === undefined ? USUAL_RATIO * noise : 1e-6 * goodWhen.residual_urad;
+  if (swing === null || limitRad === 0 || swing.residualRad <= limitRad) return null;
+  const words = `Noise about the fit of ${(1e6 * swing.residualRad).toPrecision(2)} µrad, more than ${(1e6 * limitRad).toPrecision(2)} µrad.`;
+  return { words, sinceUtcMs: fromUtcMs };
+}
+
+/** A plain swing leaves the pendulum swinging by about the change of its rest position; a tenth of that is no answer (an estimate). */
+const LEAST_ANSWER = 0.1;
+/** Ringing of before may cancel that of the swing; then the middle has moved all the same, by the plan within this. */
+const AS_PLANNED = 0.2;
+/** Below so many standard uncertainties of the fitted amplitude nothing is said. */
+const SURE = 5;
+
+/** A pendulum that touches or is caged: no swing at its own period, and no new place to swing about. */
+function noResponse(
+  { rig, swungFromDeg, angleDeg, fromUtcMs, toUtcMs, deflection, before }: DwellLook,
+  swing: FreeSwing | null,
+): string | null {
+  if (swing === null || swungFromDeg === null || deflection === null || rig.sources.shape === 'none') return null;
+  const [fromRad, toRad] = [swungFromDeg, angleDeg].map((deg) => predictEquilibriumRad(rig, deg));
+  const gamma = pendulumOf(rig)?.oscillator.gamma;
+  if (fromRad == null || toRad == null || gamma === undefined) return null;
+  const plannedRad = Math.abs(toRad - fromRad);
+  const growth = Math.exp((gamma * (toUtcMs - fromUtcMs)) / 1000);
+  const uRad = growth * swing.residualRad * Math.sqrt(2 / deflection.value.length);
+  if (SURE * uRad > LEAST_ANSWER * plannedRad) return null;
+  const foundRad = growth * swing.amplitudeRad;
+  if (foundRad >= LEAST_ANSWER * plannedRad) return null;
+  const movedRad = before?.centreRad == null ? null : swing.centreRad - before.centreRad;
+  if (movedRad !== null && Math.abs(movedRad - (toRad - fromRad)) <= AS_PLANNED * plannedRad) return null;
+  return `the pendulum did not answer the swing: it swings by ${micro(foundRad)} µrad, about ${micro(plannedRad)} µrad were to be expected`;
 }
 
 function surroundings(look: DwellLook): string[] {

@@ -13,7 +13,7 @@ import { channelsOfRun, lastSampleUtcMs } from '../../store/runs-read';
 import type { Services } from '../services';
 import { excursionCondition, lateCondition, limitConditions } from './channel-conditions';
 import { OutageCall } from './outage-call';
-import { conditionsOf, isSlow, isWatched, type Condition } from './rig-conditions';
+import { conditionsOf, isSlow, isWatched, runNowOf, type Condition } from './rig-conditions';
 
 /** How often the rigs are looked at when nothing happens, ms. */
 const usualPaceMs = 5_000;
@@ -151,10 +151,7 @@ export class AlarmWatch {
     const known = await this.knownOf(labId, rigId);
     const found = conditionsOf({
       utcMs: services.clock.utcMs(),
-      run:
-        facts === null
-          ? null
-          : { id: facts.runId, state: facts.state, reason: facts.reason, reasonCode: facts.reasonCode, startedUtcMs: facts.startedAtUtcMs },
+      run: facts === null ? null : runNowOf(facts, driver?.parts.start.rig.measured?.period_s?.value ?? null),
       quarantined: quarantined === null ? null : { runId: quarantined.start.runId, why: quarantined.why },
       link: station.link.health(),
       linkWasReady: station.link.controller() !== null,

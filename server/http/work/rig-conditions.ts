@@ -1,5 +1,7 @@
-import { alarmOfHold, type AlarmCode, type Ringing } from '@/shared/alarms/catalog';
+import type { AlarmCode, Ringing } from '@/shared/alarms/catalog';
+import { alarmOfHold } from '@/shared/alarms/of-holds';
 import type { RunState } from '@/shared/contracts/runs';
+import type { RunFacts } from '../../engine/run-facts';
 import type { LinkHealth } from '../../interfaces/turntable-link';
 
 /** A condition that holds now. */
@@ -14,10 +16,26 @@ export interface Condition {
   sinceUtcMs?: number;
 }
 
+interface RunNow {
+  id: string;
+  state: RunState;
+  reason: string;
+  reasonCode: string;
+  startedUtcMs: number | null;
+  /** The last dwell was noisier than an ordinary night's; null where it was not. */
+  loud: { words: string; sinceUtcMs: number } | null;
+  /** Of the pendulum, s; null where it is not measured. */
+  periodS: number | null;
+}
+
+export const runNowOf = ({ runId, state, reason, reasonCode, startedAtUtcMs, loud }: RunFacts, periodS: number | null): RunNow => ({
+  ...{ id: runId, state, reason, reasonCode, startedUtcMs: startedAtUtcMs, loud, periodS },
+});
+
 /** What is seen of a rig at one moment. */
 export interface RigNow {
   utcMs: number;
-  run: { id: string; state: RunState; reason: string; reasonCode: string; startedUtcMs: number | null } | null;
+  run: RunNow | null;
   /** Why an unfinished run could not be taken up; null where there is none. */
   quarantined: { runId: string; why: string } | null;
   link: Pick<LinkHealth, 'condition' | 'detail'>;
@@ -54,6 +72,15 @@ export function conditionsOf(now: RigNow): Condition[] {
     // A line that is being opened for the first time, as at the start of the server, may take a while.
     found.push({ code: 'link-lost', subject: '', words, runId, ...(now.linkWasReady ? {} : { onDelayS: firstAnswerS }) });
   }
+  // What has to do with the deflection is told after a period at the earliest.
+  if (run?.loud != null)
+    found.push({
+      code: 'residual-high',
+      subject: '',
+      runId,
+      ...run.loud,
+      ...(run.periodS === null ? {} : { onDelayS: Math.round(run.periodS) }),
+    });
   const silent = silentSince(now);
   if (silent !== null)
     found.push({
@@ -79,7 +106,7 @@ const slow: readonly AlarmCode[] = ['excursion', 'channel-level', 'channel-slope
 /** Kinds that a look can tell to be over; others end by what somebody does. */
 const watched: readonly AlarmCode[] = [
   ...(['unexpected-motion', 'limit', 'interlock', 'supply', 'controller-reset', 'proof-failed', 'home-edge', 'held'] as const),
-  ...(['not-taken-up', 'link-lost', 'deflection-silent', 'disk-low'] as const),
+  ...(['no-response', 'no-deflection', 'not-taken-up', 'link-lost', 'deflection-silent', 'residual-high', 'disk-low'] as const),
   ...slow,
 ];
 

@@ -1,4 +1,4 @@
-import { alarmOfHold } from '@/shared/alarms/catalog';
+import { alarmOfHold } from '@/shared/alarms/of-holds';
 import type { RunStart } from '@/shared/archive/run-records';
 import { askForRunNotice, type RunNotice } from '../../notify/run-notices';
 import type { Services } from '../services';

@@ -1,33 +1,8 @@
 import type { ProtocolDocument, Step } from '@/shared/protocol/document';
-import type { SampleReader } from '@/server/interfaces/sample-reader';
 import { type Bench, brief, makeBench, runStart, startUtcMs } from './rig-bench';
+import { readerOf, type Signal } from './signals';
 
 /** Steps that end by what is measured or by a person, and what a dwell that is not good does to a repeat. */
-
-interface Signal {
-  name: string;
-  unit: string;
-  /** Value at an instant, s after the start; null: no sample. */
-  at: (tS: number) => number | null;
-}
-
-/** A reader of signals that are functions of time, sampled twice a second up to now. */
-function readerOf(bench: () => Bench, signals: readonly Signal[]): SampleReader {
-  return {
-    deflection: () => (signals.some(({ name }) => name === 'deflection') ? 'deflection' : null),
-    read: (channel, { fromUtcMs, toUtcMs }) => {
-      const signal = signals.find(({ name }) => name === channel);
-      if (signal === undefined) return null;
-      const untilUtcMs = Math.min(toUtcMs, bench().clock.utcMs());
-      const found: [number, number][] = [];
-      for (let at = Math.ceil(fromUtcMs / 500) * 500; at <= untilUtcMs; at += 500) {
-        const value = signal.at((at - startUtcMs) / 1000);
-        if (value !== null) found.push([at, value]);
-      }
-      return { unit: signal.unit, rateHz: 2, utcMs: Float64Array.from(found, ([at]) => at), value: Float64Array.from(found, ([, v]) => v) };
-    },
-  };
-}
 
 const withSteps = (...steps: Step[]): ProtocolDocument => ({
   formatVersion: 1,

@@ -12,7 +12,15 @@ const quiet: RigNow = {
   open: { interlock: false, supply: false },
   deflectionUtcMs: null,
 };
-const running: NonNullable<RigNow['run']> = { id: 'run', state: 'running', reason: '', reasonCode: '', startedUtcMs: utcMs - 3_600_000 };
+const running: NonNullable<RigNow['run']> = {
+  id: 'run',
+  state: 'running',
+  reason: '',
+  reasonCode: '',
+  startedUtcMs: utcMs - 3_600_000,
+  loud: null,
+  periodS: 420,
+};
 const codesOf = (now: Partial<RigNow>) => conditionsOf({ ...quiet, ...now }).map(({ code }) => code);
 
 test('a rig at rest gives cause for none', () => {
@@ -22,9 +30,11 @@ test('a rig at rest gives cause for none', () => {
 
 test('a held run is the alarm of its reason; a hold that a person asked for is none', () => {
   const held = (reasonCode: string) => codesOf({ run: { ...running, state: 'held', reasonCode, reason: 'Why.' } });
-  expect(['held-by-person', 'interlock', 'table-slipped', 'proof-failed', 'database-away', 'arm-ended'].map(held)).toEqual([
-    ...[[], ['interlock'], ['home-edge'], ['proof-failed'], ['held'], ['held']],
-  ]);
+  expect(
+    ['held-by-person', 'interlock', 'table-slipped', 'proof-failed', 'database-away', 'arm-ended', 'no-response', 'no-deflection'].map(
+      held,
+    ),
+  ).toEqual([...[[], ['interlock'], ['home-edge'], ['proof-failed'], ['held'], ['held'], ['no-response'], ['no-deflection']]]);
 });
 
 test('the interlock that voided the arm is told once, with or without a run', () => {
@@ -47,4 +57,11 @@ test('deflection that flowed and is silent for over a minute of a run; one that 
   expect(codesOf({ run: running, deflectionUtcMs: null })).toEqual([]);
   expect(codesOf({ run: running, deflectionUtcMs: utcMs - 86_400_000 })).toEqual([]);
   expect(codesOf({ deflectionUtcMs: utcMs - 61_000 })).toEqual([]);
+});
+
+test('a dwell noisier than usual is told when a period has passed since it began, and no more after a quiet one', () => {
+  const loud = { words: 'Noise about the fit of 90 µrad, more than 30 µrad.', sinceUtcMs: utcMs - 800_000 };
+  expect(conditionsOf({ ...quiet, run: { ...running, loud } })).toMatchObject([
+    { code: 'residual-high', ...loud, onDelayS: 420, runId: 'run' },
+  ]);
 });
