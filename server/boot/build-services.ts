@@ -101,8 +101,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     background: (work, what) => background.add(work, what),
     takenUp: takenUp.promise,
     databaseAwaySinceUtcMs: () => awaySinceUtcMs,
-    knownAuditHeads: () => knownHeads(config.stateDir),
-    freeBytes: overrides.freeBytes ?? (() => freeBytesAt(config.stateDir)),
+    ...{ knownAuditHeads: () => knownHeads(config.stateDir), freeBytes: overrides.freeBytes ?? (() => freeBytesAt(config.stateDir)) },
     breathe: () => new Promise((resolve) => setImmediate(resolve)),
     pokeJobs: () => (crew.poke(), told.jobsQueued()),
   };

@@ -34,13 +34,12 @@ interface Eyes {
 
 function dwellFinding(start: RunStart, look: Look & { kind: 'dwell' }, { reader, nowUtcMs, deflection }: Eyes): Finding | null {
   const { rig, protocol, simulated } = start;
-  const { kind: _, ...asked } = look;
-  const { fromUtcMs, toUtcMs } = asked;
+  const { fromUtcMs, toUtcMs } = look;
   const window = { fromUtcMs, toUtcMs };
   const series = deflection === null ? null : reader.read(deflection, window);
   if (series === null && protocol.goodWhen?.channels === undefined) return null;
   const facts = judgeDwell({
-    ...asked,
+    ...look,
     ...{ rig, goodWhen: protocol.goodWhen, nowUtcMs, deflection: series },
     channel: (name) => reader.read(name, window),
     simulated: simulated !== null,

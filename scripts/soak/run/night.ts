@@ -171,6 +171,21 @@ const deeds: Readonly<Record<string, Deed>> = {
 /** People resume more often than they stop, else most nights would be short. */
 const drawn = [...Object.keys(deeds), 'resume', 'resume', 'kill', 'outage', 'drop', 'hold'].filter((name) => name !== 'stop');
 
+/** Every so many nights one has a prompt and a proof. */
+const isAttended = (seed: number) => seed % 7 === 5;
+
+/** A prompt on the way and a proof at the end; somebody confirms now and then, too early, in time or too late. */
+function attend({ steps, ...protocol }: ProtocolDocument, { between }: Dice): ProtocolDocument {
+  const prompt = {
+    kind: 'prompt' as const,
+    text: 'Look at the spot',
+    atMost_s: between(20, 60),
+    otherwise: between(0, 2) === 0 ? 'stop' : 'hold',
+  } as const;
+  const otherwise = (['hold', 'continue', 'stop'] as const)[between(0, 2)] ?? 'hold';
+  return { ...protocol, steps: [...steps.slice(0, 4), prompt, ...steps.slice(4), { kind: 'proof', otherwise }] };
+}
+
 function protocolOf(policy: InterruptionPolicy, { between }: Dice): ProtocolDocument {
   const dwell = () => ({ kind: 'dwell' as const, for_s: between(3, 50) });
   return {
@@ -218,9 +233,12 @@ export async function runNight(seed: number): Promise<Night> {
   const between = (least: number, greatest: number) => uniformInt(random, least, greatest);
   const dice: Dice = { between, upTo: (greatest) => between(0, greatest) };
   const policy = policies[seed % 3] as InterruptionPolicy;
-  const world = new World(startOf(protocolOf(policy, dice)), { seed, startUtcMs });
+  const plain = protocolOf(policy, dice);
+  const world = new World(startOf(isAttended(seed) ? attend(plain, dice) : plain), { seed, startUtcMs });
   const done: string[] = [];
   await world.begin();
+  if (isAttended(seed))
+    for (let count = between(0, 6); count > 0; count -= 1) world.clock.after(between(0, TROUBLE_MS), () => world.confirm());
   for (let count = between(1, MOST_DEEDS); count > 0; count -= 1) {
     const name = between(0, 19) === 0 ? 'stop' : (drawn[between(0, drawn.length - 1)] as string);
     const [atMs, own] = [between(0, TROUBLE_MS), xoroshiro128plus(between(0, 2 ** 30))];

@@ -186,6 +186,20 @@ export class World {
     void this.driver.resume('Ben');
   }
 
+  /** Somebody has been at the rig, armed it again and confirms the prompt that waits: from then on motion is meant, as after a resume. */
+  confirm(): void {
+    if (!this.alive) return;
+    const before = this.arm;
+    this.arm = this.start.arm;
+    const atMs = this.nowMs;
+    if (this.driver.facts().waiting?.mayConfirm.ok !== true) {
+      this.arm = before;
+      return;
+    }
+    this.witness.resumes.push(atMs);
+    void this.driver.requests.confirmPrompt('Ben');
+  }
+
   hazard(kind: 'reset' | 'interlock' | 'supply', lastsMs: number): void {
     const { controller, clock } = this;
     this.witness.hazards.push({ kind, atMs: this.nowMs });

@@ -17,7 +17,25 @@ const standing: fc.Arbitrary<Step> = fc.oneof(
   fc.string({ minLength: 1, maxLength: 12 }).map((label): Step => ({ kind: 'mark', label })),
 );
 
-const leaf = fc.oneof(swingStep, standing);
+const policy = fc.constantFrom('hold' as const, 'continue' as const, 'stop' as const);
+
+/** Steps that end by what is measured or by a person. */
+const conditional: fc.Arbitrary<Step> = fc.oneof(
+  fc
+    .record({ drift_urad_per_h: fc.integer({ min: 1, max: 500 }), atMost_s: fc.integer({ min: 600, max: 20_000 }), otherwise: policy })
+    .map(({ drift_urad_per_h, ...rest }): Step => ({ kind: 'settle', calmWhen: { drift_urad_per_h, window_s: 600 }, ...rest })),
+  fc
+    .record({ below: fc.integer({ min: -5, max: 40 }), for_s: fc.integer({ min: 1, max: 600 }), otherwise: policy })
+    .map(({ below, for_s, otherwise }): Step => ({
+      ...{ kind: 'wait', until: { channel: 'box temperature', below, for_s } },
+      ...{ atMost_s: 5400, otherwise },
+    })),
+  fc
+    .constantFrom('hold' as const, 'stop' as const)
+    .map((otherwise): Step => ({ kind: 'prompt', text: 'Hands clear', atMost_s: 600, otherwise })),
+);
+
+const leaf = fc.oneof({ weight: 3, arbitrary: swingStep }, { weight: 3, arbitrary: standing }, { weight: 1, arbitrary: conditional });
 
 const stepOfDepth = (depth: number): fc.Arbitrary<Step> =>
   depth === 0

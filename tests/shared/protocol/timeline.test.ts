@@ -165,7 +165,9 @@ function byHand(list: readonly Step[], from: number): { seconds: number; angle: 
       seconds += moveS(Math.abs(to - angle));
       angle = to;
     } else if (step.kind === 'dwell') seconds += step.for_s ?? 420 * (step.periods ?? 0);
-    else if (step.kind === 'settle') seconds += step.for_s ?? 0;
+    // Of what ends by a condition the least is planned: the time for which it has to hold.
+    else if (step.kind === 'settle') seconds += step.for_s ?? step.calmWhen?.window_s ?? 0;
+    else if (step.kind === 'wait' && 'channel' in step.until) seconds += step.until.for_s ?? 60;
     else if (step.kind === 'repeat') {
       for (let pass = 0; pass < (step.times ?? 0); pass += 1) {
         const inner = byHand(step.steps, angle);
