@@ -45,20 +45,31 @@ export function useDraftSync({ protocolId, document, begin, mayWrite }: SyncInpu
     latest.current = { document, state };
   });
 
+  const underWay = useRef<Promise<string | null> | null>(null);
+
   const flush = useCallback(async (): Promise<string | null> => {
+    // One save at a time: the next one is over what this one stored, not over what was there before it.
+    while (underWay.current !== null) await underWay.current;
     const now = latest.current;
     if (now.document === now.state.saved) return now.state.etag;
     if (!mayWrite || now.state.status === 'overtaken') return null;
     dispatch({ kind: 'sent' });
-    try {
-      const etag = await save(now.document, now.state.etag);
-      own.current.add(etag);
-      dispatch({ kind: 'stored', etag, document: now.document, present: latest.current.document });
-      return etag;
-    } catch (error) {
-      dispatch(failureOf(error));
-      return null;
-    }
+    const store = async () => {
+      try {
+        const etag = await save(now.document, now.state.etag);
+        own.current.add(etag);
+        latest.current = { ...latest.current, state: { ...latest.current.state, etag, saved: now.document } };
+        dispatch({ kind: 'stored', etag, document: now.document, present: latest.current.document });
+        return etag;
+      } catch (error) {
+        dispatch(failureOf(error));
+        return null;
+      } finally {
+        underWay.current = null;
+      }
+    };
+    underWay.current = store();
+    return underWay.current;
   }, [mayWrite, save]);
 
   useEffect(() => dispatch({ kind: 'edited', document }), [document]);
