@@ -1,21 +1,11 @@
 /** Three projects: pure code and server in Node, components in a DOM, the product in a real browser. */
 const alias = { '^@/(.*)$': '<rootDir>/$1' };
-const untransformed = ['/node_modules/(?!(lucia|@lucia-auth|@oslojs|pure-rand|fflate|temporal-polyfill|temporal-utils)/)'];
 const [expoUntransformed, ...otherUntransformed] = require('jest-expo/web/jest-preset').transformIgnorePatterns;
 const webUntransformed = [expoUntransformed.replace('(?!(', '(?!(temporal-polyfill|temporal-utils|'), ...otherUntransformed];
 const node = {
-  testEnvironment: 'node',
-  transform: {
-    '\\.[jt]sx?$': [
-      'babel-jest',
-      {
-        configFile: false,
-        presets: ['@babel/preset-typescript'],
-        plugins: ['./tests/support/own-globals.cjs', '@babel/plugin-transform-modules-commonjs'],
-      },
-    ],
-  },
-  transformIgnorePatterns: untransformed,
+  testEnvironment: '<rootDir>/tests/support/jest/one-realm-environment.cjs',
+  runtime: '<rootDir>/tests/support/jest/one-realm-runtime.cjs',
+  transform: { '\\.tsx?$': '<rootDir>/tests/support/jest/esbuild-transformer.cjs' },
   moduleNameMapper: alias,
   modulePathIgnorePatterns: ['<rootDir>/dist', '<rootDir>/.state'],
 };

@@ -12,8 +12,8 @@ import { ensureWebBuild } from './lib/web-build.mjs';
 
 const args = process.argv.slice(2);
 const whole = args.length === 0;
-/** A real browser or a real pseudo-terminal: the only tests that wait for the machine itself. */
-const inRealTime = /tests\/(e2e|contract\/link)\//;
+/** A real browser, pseudo-terminal, process or socket: the tests that wait for the machine itself. */
+const inRealTime = /tests\/(e2e|contract|server\/(boot|http))\//;
 const start = Date.now();
 await ensureNodeModules();
 await ensureDebianPackages(['postgresql', 'chromium-headless-shell', 'socat', 'ser2net', 'g++', 'gcc-avr', 'avr-libc']);
@@ -43,7 +43,7 @@ for (const report of [inBrowser, other]) rmSync(report, { force: true });
 /** The browser's tests and those on PostgreSQL wait most of the time: all goes on beside each other, each in one row of its own. */
 async function all() {
   const [checked, ...tested] = await Promise.all([
-    standingBack(process.execPath, [join(root, 'scripts', 'check.mjs')], { cwd: root }),
+    standingBack(process.execPath, [join(root, 'scripts', 'check.mjs'), '--beside-tests'], { cwd: root }),
     ensureWebBuild().then(() =>
       jest(['--selectProjects', 'e2e-row', '-i'], inBrowser, (command, args, options) =>
         pass(command, args, { ...options, env: { ...env, EVENFALL_SCREENS: 'failed' } }),

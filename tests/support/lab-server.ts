@@ -38,7 +38,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
   publicUrl: null,
   trustedProxies: 0,
   demo: true,
-  virtualExitDelayS: 120,
+  virtualExitDelayS: 5,
   stateDir: tmpdir(),
   webDir: null,
   smtpUrl: null,
@@ -220,7 +220,10 @@ export class LabServer {
 
   /** Lets time pass until the engine shows the run in one of these states. */
   async until(runId: string, ...states: RunState[]): Promise<RunView> {
-    const there = () => states.includes(this.services.supervisor.driverOf(runId)?.facts().state ?? 'finished');
+    const there = () => {
+      const driver = this.services.supervisor.driverOf(runId);
+      return driver === null || states.includes(driver.facts().state);
+    };
     await this.advance(3_600_000, there);
     const view = await this.view(runId);
     if (!states.includes(view.state)) throw new Error(`the run is ${view.state}: ${view.reason}`);

@@ -198,7 +198,7 @@ function integrate(plan: NightPlan, rig: RigDocument, { angleDegAt, endS }: { an
   let theta = 0;
   for (let k = 0; k < 100; k += 1) theta = pull(startRad - theta) / omega0Squared;
   let speed = 0;
-  const rate = plan.rateHz ?? 1;
+  const rate = plan.rateHz ?? 0.5;
   const perSample = Math.max(1, Math.ceil(0.5 / (rate * 0.25)));
   const h = 1 / (rate * 2 * perSample);
   const count = Math.floor(endS * rate);

@@ -30,7 +30,7 @@ describe('a path that cannot be opened', () => {
     });
     const link = createLink({ factory: serialFactory({ path, baudRate: 115_200 }, clock), clock, rig: benchRig, epoch: 1 });
     link.open();
-    await sleep(400);
+    for (let turns = 0; link.health().condition === 'opening' && turns < 1000; turns += 1) await sleep(10);
     expect(link.health()).toMatchObject({ condition: 'lost', detail: expect.stringContaining('There is no port') });
     await link.close();
   });

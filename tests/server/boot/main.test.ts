@@ -75,5 +75,5 @@ test.each(['SIGTERM', 'SIGINT'] as const)('migrates, seeds, says where it listen
     .split('\n')
     .filter((line) => /"level":(40|50|60)/.test(line));
   expect({ code, serious }).toEqual({ code: 0, serious: [] });
-  expect(performance.now() - askedMs).toBeLessThan(2000);
+  expect(performance.now() - askedMs).toBeLessThan(10_000);
 });

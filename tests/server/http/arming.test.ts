@@ -10,7 +10,7 @@ import { LabServer, quickProtocol } from '@/tests/support/lab-server';
 const database = databaseOfThisFile();
 let lab: LabServer;
 beforeAll(async () => {
-  lab = await LabServer.start(database());
+  lab = await LabServer.start(database(), { config: { virtualExitDelayS: 120 } });
 }, 60_000);
 afterAll(() => lab.stop());
 jest.setTimeout(30_000);

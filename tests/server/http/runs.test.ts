@@ -43,7 +43,7 @@ describe('a start', () => {
     expect(unsigned.body.errors.map(({ path }: { path: string }) => path)).toEqual(['armed', 'cautions']);
     await lab.sign();
     expect((await lab.askStart(protocolId).expect(409)).body).toMatchObject({ code: 'not-armed', errors: [{ path: 'armed' }] });
-    await lab.arm(0.05);
+    await lab.arm(0.02);
     expect((await lab.askStart(protocolId).expect(409)).body).toMatchObject({
       code: 'not-armed',
       detail: expect.stringContaining('arm it for longer'),
