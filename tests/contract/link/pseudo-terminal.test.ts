@@ -63,7 +63,7 @@ describe('a path that cannot be opened', () => {
     });
     const link = createLink({ factory, clock, rig: benchRig, epoch: 1 });
     link.open();
-    await sleep(300);
+    for (let turns = 0; link.health().condition === 'opening' && turns < 1000; turns += 1) await sleep(10);
     expect(link.health().detail).toContain('in use by another program');
     await holder.close();
     await (await benches.on(process)).until('the link after the other program closed', () => link.health().condition === 'ready', 10_000);
