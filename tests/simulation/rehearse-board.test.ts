@@ -51,7 +51,7 @@ test('gives the G that the pendulum was made with, from an archive that verifies
     .filter(({ kind }) => kind === 'home-edge');
   expect(passes.length).toBeGreaterThanOrEqual(4);
   expect(passes.every(({ data }) => Math.abs(data.offDeg ?? NaN) < 1.01 / rig.motion!.stepsPerDegree)).toBe(true);
-}, 60_000);
+}, 120_000);
 
 test('a rig that asks for more than the firmware can do is refused in a sentence', async () => {
   writeFileSync(join(folder, 'fine.json'), JSON.stringify({ ...rig, motion: { ...rig.motion, stepsPerDegree: 2000 } }));
