@@ -1,4 +1,4 @@
-import { useEffect, useId, useRef, type ReactNode } from 'react';
+import { useEffect, useId, useRef, useState, type ReactNode, type RefObject } from 'react';
 import { View } from 'react-native';
 import { IconButton } from './button';
 import { Heading } from './text';
@@ -26,6 +26,8 @@ export function Sheet(props: SheetProps) {
 function OpenSheet({ title, onClose, children, footer, mustAnswer = false, testID }: SheetProps) {
   const id = useId();
   const dialog = useRef<HTMLDialogElement>(null);
+  const content = useRef<HTMLDivElement>(null);
+  const scrolls = useScrolls(content);
 
   useEffect(() => {
     const element = dialog.current;
@@ -54,11 +56,24 @@ function OpenSheet({ title, onClose, children, footer, mustAnswer = false, testI
           </Heading>
           {mustAnswer ? null : <IconButton icon="close" label="Close" onPress={onClose} testID="sheet-close" />}
         </View>
-        <div className="ef-scroll min-h-0 shrink overflow-y-auto px-5 pb-5" tabIndex={-1}>
+        <div ref={content} className="ef-scroll min-h-0 shrink overflow-y-auto px-5 pb-5" tabIndex={scrolls ? 0 : -1}>
           <View className="gap-4">{children}</View>
         </div>
         {footer === undefined ? null : <View className="gap-3 border-t border-line px-5 pb-5 pt-4">{footer}</View>}
       </View>
     </dialog>
   );
+}
+
+/** Whether an element has more than it shows: only then the keyboard has a use for coming to it. */
+function useScrolls(place: RefObject<HTMLElement | null>): boolean {
+  const [scrolls, setScrolls] = useState(false);
+  useEffect(() => {
+    const element = place.current;
+    if (element === null || typeof ResizeObserver !== 'function') return undefined;
+    const observer = new ResizeObserver(() => setScrolls(element.scrollHeight > element.clientHeight + 1));
+    for (const one of [element, element.firstElementChild]) if (one !== null) observer.observe(one);
+    return () => observer.disconnect();
+  }, [place]);
+  return scrolls;
 }
