@@ -37,10 +37,10 @@ const jest = (more, report, run = pass) =>
     ],
     { cwd: root, env },
   );
-const [inBrowser, other] = [join(output, 'jest-browser.json'), join(output, 'jest.json')];
-for (const report of [inBrowser, other]) rmSync(report, { force: true });
+const [inBrowser, ...halves] = ['jest-browser.json', 'jest.json', 'jest-other-half.json'].map((name) => join(output, name));
+for (const report of [inBrowser, ...halves]) rmSync(report, { force: true });
 
-/** The browser's tests and those on PostgreSQL wait most of the time: all goes on beside each other, each in one row of its own. */
+/** The browser's tests, two halves of the others and the check go on beside each other, each in one row of its own: no processor waits. */
 async function all() {
   const [checked, ...tested] = await Promise.all([
     standingBack(process.execPath, [join(root, 'scripts', 'check.mjs'), '--beside-tests'], { cwd: root }),
@@ -49,19 +49,21 @@ async function all() {
         pass(command, args, { ...options, env: { ...env, EVENFALL_SCREENS: 'failed' } }),
       ),
     ),
-    jest(['--selectProjects', 'node', 'web', '-i'], other, standingBack),
+    ...halves.map((report, k) =>
+      jest(['--selectProjects', 'node', 'web', '-i', `--shard=${k + 1}/${halves.length}`], report, standingBack),
+    ),
   ]);
   return { checked, tested: Math.max(...tested) };
 }
 
 async function some() {
   await ensureWebBuild();
-  return { checked: 0, tested: await jest(args, other) };
+  return { checked: 0, tested: await jest(args, halves[0]) };
 }
 
 const ran = await (whole ? all() : some());
 let { tested } = ran;
-const reports = (whole ? [inBrowser, other] : [other]).map((report) => JSON.parse(readFileSync(report, 'utf8')));
+const reports = (whole ? [inBrowser, ...halves] : halves.slice(0, 1)).map((report) => JSON.parse(readFileSync(report, 'utf8')));
 const sum = (key) => reports.reduce((total, report) => total + report[key], 0);
 /** The files behind the failures; the row with the browser is one file that names others by its outermost descriptions. */
 const failed = reports

@@ -50,7 +50,7 @@ export class Lab {
     await seedDemo(database.connection, { nowUtcMs: world.clock.utcMs(), hashPassword, sha256: sha256Hex, link: 'simulated' });
     const mailbox = await startDemoMailbox({ folder: mkdtempSync(join(tmpdir(), 'evenfall-mail-')), clock: world.clock });
     const mail = createSmtpMail({ url: mailbox.url, from: 'Evenfall <evenfall@quillfen.example>' });
-    const server = await LabServer.start(database, { world, config: { webDir }, overrides: { mail } });
+    const server = await LabServer.start(database, { world, config: { webDir, virtualExitDelayS: 120 }, overrides: { mail } });
     const lab = new Lab(server, { address: await listensAgain(server.built), database, mailbox, closeMail: () => mail.close() });
     lab.letTimeFlow();
     return lab;
