@@ -11,6 +11,7 @@ import { createSessions } from '@/server/auth/sessions';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import { AccessDirectory } from '@/server/http/access-directory';
 import { createApp } from '@/server/http/create-app';
+import { auditRoutes } from '@/server/http/routes/audit';
 import { peopleRoutes } from '@/server/http/routes/people';
 import { AnswerCounts } from '@/server/http/metrics';
 import type { Services } from '@/server/http/services';
@@ -70,7 +71,7 @@ export async function peopleApp(connection: Connection, changes: Partial<ServerC
   const handlers = mailJobs({ db: connection.db, clock, mail, newToken, sha256 });
   let read = 0;
   return {
-    app: createApp(services, peopleRoutes),
+    app: createApp(services, [...peopleRoutes, ...auditRoutes]),
     clock,
     services,
     mails: async () => {

@@ -262,6 +262,8 @@ describe('samples for a plot', () => {
   });
 
   test('without a choice are those of the deflection that the rig recorded', async () => {
+    // They are stored every half a minute here.
+    await lab.advance(31_000);
     const { body } = await lab.as('viewer', 'GET', `${labPath}/runs/${runId}/samples`).expect(200);
     expect(body.channel).toMatchObject({ name: 'deflection', source: 'simulated' });
     expect(body.total).toBeGreaterThan(500);
