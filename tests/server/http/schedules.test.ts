@@ -55,6 +55,7 @@ test('starts a run at its time, once, in the name of whoever made it, and ends a
   expect(runs.items).toHaveLength(1);
   expect((await lab.as('viewer', 'GET', `${base}/schedules`).expect(200)).body.items).toEqual([]);
   await lab.until(run.id as string, 'finished');
+  await lab.advance(5_000, () => mails.length > 1);
   expect(mails.map(({ subject }) => subject.split(':')[0])).toEqual(['Started', 'Finished']);
   mails.length = 0;
 });
