@@ -50,8 +50,7 @@ export function analyse(archive: Archive, plan: EvaluationPlan): Analysis {
   const near = wayOffS === 0 ? first : analyseAt(archive, plan, { series, offsetS: wayOffS, judge: false });
   const foundS = wayOffS + (fineOffset({ archive, ...near })?.value ?? 0);
   const offsetS = Math.abs(foundS) > guardedS ? foundS : 0;
-  const isSame = offsetS === (near === first ? 0 : wayOffS);
-  const last = analyseAt(archive, plan, { series, offsetS, judge: true, ...(isSame ? { start: near.start } : {}) });
+  const last = analyseAt(archive, plan, { series, offsetS, judge: true, start: near.start });
   const fine = fineOffset({ archive, ...last });
   return { ...last, clockOffset: fine === null ? null : { value: offsetS + fine.value, u: fine.u } };
 }

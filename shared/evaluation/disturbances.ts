@@ -1,6 +1,6 @@
-import { factorise, applyQTransposed, sumOfSquares } from '../statistics/least-squares';
+import { factorise, applyQTransposed, sumOfSquares, type QrFactors } from '../statistics/least-squares';
 import { biweight, huberWeight, median, robustScale } from '../statistics/robust';
-import { ringDownSegment } from '../statistics/ring-down';
+import { cosine, ringDownSegment, sine } from '../statistics/ring-down';
 import { SingularMatrixError } from '../statistics/symmetric';
 import type { DwellFit } from './ring-down-fit';
 import { dataOf, type Segment } from './segment';
@@ -103,14 +103,14 @@ function bestKnock(segment: Segment, excess: Float64Array, alpha: readonly numbe
   const { t } = segment.averages;
   const rootTrust = excess.map((value, i) => (Number.isFinite(value) ? Math.sqrt(segment.trust?.[i] ?? 1) : 0));
   const rest = excess.map((value, i) => (Number.isFinite(value) ? value * (rootTrust[i] as number) : 0));
-  const without = restOf(segment, { rest, rootTrust, alpha, knocksS: segment.knocksS });
+  const explains = knockGains(segment, { rest, rootTrust, alpha });
   const margin = Math.max(6, Math.ceil(knockMargin * t.length));
   let best = { k: -1, atS: NaN, gain: 0 };
   const tryAt = (k: number) => {
     if (k < margin || k >= t.length - margin) return;
     const atS = ((t[k - 1] as number) + (t[k] as number)) / 2;
     if (segment.knocksS.some((known) => Math.abs(known - atS) < margin * ((t[1] as number) - (t[0] as number)))) return;
-    const gain = without - restOf(segment, { rest, rootTrust, alpha, knocksS: [...segment.knocksS, atS] });
+    const gain = explains(k);
     if (gain > best.gain) best = { k, atS, gain };
   };
   for (let k = margin; k < t.length - margin; k += knockStride) tryAt(k);
@@ -126,20 +126,43 @@ interface Rest {
   alpha: readonly number[];
 }
 
-/** What a linear fit of the model with these knocks leaves of the residuals. */
-function restOf(segment: Segment, of: Rest & { knocksS: readonly number[] }): number {
-  const { rest, rootTrust, knocksS } = of;
-  const { averages } = segment;
-  const { columns } = ringDownSegment({ ...dataOf(segment), knocksS }).basis(of.alpha);
-  const weighted = columns.map((column) =>
-    column.map((value, i) => value * (rootTrust[i] as number) * Math.sqrt(averages.weight[i] as number)),
-  );
+/**
+ * How much more of the residuals a knock before datum k explains than the linear model with the knocks that are known, by k. The known columns
+ * are factorised once; a knock adds two, which are turned with them.
+ */
+function knockGains(segment: Segment, { rest, rootTrust, alpha }: Rest): (k: number) => number {
+  const { weight } = segment.averages;
+  const root = rootTrust.map((value, i) => value * Math.sqrt(weight[i] as number));
+  const columns = ringDownSegment(dataOf(segment))
+    .basis(alpha)
+    .columns.map((column) => column.map((value, i) => value * (root[i] as number)));
+  const swinging = [cosine, sine].map((column) => Float64Array.from(columns[column] as Float64Array));
+  const size = columns.length;
+  const qr = factorisedOrNull(columns);
+  if (qr === null) return () => 0;
+  const left = Float64Array.from(rest);
+  applyQTransposed(qr, left);
+  const without = sumOfSquares(left.subarray(size));
+  return (k) => {
+    const added = swinging.map((column) => {
+      const later = Float64Array.from(column).fill(0, 0, k);
+      applyQTransposed(qr, later);
+      return later.subarray(size);
+    });
+    const own = factorisedOrNull(added);
+    if (own === null) return -Infinity;
+    const tail = left.slice(size);
+    applyQTransposed(own, tail);
+    return without - sumOfSquares(tail.subarray(added.length));
+  };
+}
+
+/** Null where the columns depend on each other. */
+function factorisedOrNull(columns: Float64Array[]): QrFactors | null {
   try {
-    const qty = Float64Array.from(rest);
-    applyQTransposed(factorise(weighted), qty);
-    return sumOfSquares(qty.subarray(columns.length));
+    return factorise(columns);
   } catch (error) {
-    if (error instanceof SingularMatrixError) return Infinity;
+    if (error instanceof SingularMatrixError) return null;
     throw error;
   }
 }

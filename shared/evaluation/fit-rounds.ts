@@ -20,8 +20,8 @@ import type { Analysis } from './analysis';
 /** Data are averaged to this many boxes a period before they are fitted. */
 const boxesPerPeriod = 60;
 
-/** Changes this small, relative to what they change, count as none. */
-const settledRelative = 1e-9;
+/** Changes this small, relative to what they change, count as none; before the clocks are compared, and after. */
+const settledRelative = { roughly: 1e-5, finally: 1e-9 };
 
 const settledZeroRad = 1e-12;
 
@@ -31,7 +31,7 @@ export interface FitQuestion {
   measured: MeasuredOscillator;
   start: RingDownStart | null;
   samples: readonly DwellSamples[];
-  /** Whether disturbed data are sought and trusted less. */
+  /** Whether disturbed data are sought and trusted less, and all rounds gone until nothing changes; else a look at the clock is all that is wanted. */
   judge: boolean;
 }
 
@@ -117,10 +117,11 @@ function withKnocks({ bias, disturbances: before }: Round, now: readonly Disturb
 
 function settle(question: FitQuestion, first: Round, averagesOn: (scale: ChannelScale) => BoxAverages[]): Settled {
   let round = first;
+  const within = question.judge ? settledRelative.finally : settledRelative.roughly;
   for (let count = 1; ; count += 1) {
     const outcome = fitOnce(question, round);
     const next = nextRound(outcome, round, averagesOn);
-    if (count === greatestRounds || hasSettled(outcome, round, next)) return { outcome, next };
+    if (count === greatestRounds || hasSettled(outcome, { round, next, within })) return { outcome, next };
     round = next;
   }
 }
@@ -148,12 +149,12 @@ function nextRound(outcome: FitOutcome, round: Round, averagesOn: (scale: Channe
   };
 }
 
-function hasSettled({ free, reversal }: FitOutcome, round: Round, next: Round): boolean {
+function hasSettled({ free, reversal }: FitOutcome, { round, next, within }: { round: Round; next: Round; within: number }): boolean {
   const omegaSquared = free.omega0Squared.value;
-  const stiffness = next.shifts.every((shift, i) => Math.abs(shift - (round.shifts[i] as number)) < settledRelative * omegaSquared);
-  const size = settledRelative * Math.abs(reversal?.value ?? 0);
+  const stiffness = next.shifts.every((shift, i) => Math.abs(shift - (round.shifts[i] as number)) < within * omegaSquared);
+  const size = within * Math.abs(reversal?.value ?? 0);
   const bias = (next.bias?.centres ?? []).every((value, i) => Math.abs(value - (round.bias?.centres[i] ?? 0)) <= size);
-  const frequency = Math.abs((next.bias?.omega ?? 0) - (round.bias?.omega ?? 0)) <= settledRelative * Math.sqrt(omegaSquared);
+  const frequency = Math.abs((next.bias?.omega ?? 0) - (round.bias?.omega ?? 0)) <= within * Math.sqrt(omegaSquared);
   return stiffness && bias && frequency && next.scale === round.scale;
 }
 

@@ -64,25 +64,40 @@ function ringDownBasis(tS: Float64Array, centreS: number, at: BasisAt): Basis {
     s[i] = decay * sin(omega * t);
   }
   const later = knocksS.flatMap((knockS) => [from(tS, knockS, c), from(tS, knockS, s)]);
-  return { columns: [one, time, c, s, ...later], derivatives: () => ringDownDerivatives(tS, at) };
+  return { columns: [one, time, c, s, ...later], derivatives: () => ringDownDerivatives(tS, { c, s }, at) };
 }
 
 /** The values from an instant on, 0 before. */
 function from(tS: Float64Array, knockS: number, values: Float64Array): Float64Array {
-  return values.map((value, i) => ((tS[i] as number) < knockS ? 0 : value));
+  const later = new Float64Array(values.length);
+  for (let i = 0; i < later.length; i += 1) if (!((tS[i] as number) < knockS)) later[i] = values[i] as number;
+  return later;
 }
 
 /** d cos/dω = −t sin, d sin/dω = t cos, d/dγ = −t, each with the decay. */
-function ringDownDerivatives(tS: Float64Array, at: BasisAt): BasisDerivative[] {
-  const tc = tS.map((t) => t * Math.exp(-at.gamma * t) * Math.cos(at.omega * t));
-  const ts = tS.map((t) => t * Math.exp(-at.gamma * t) * Math.sin(at.omega * t));
-  const first: BasisDerivative[] = [
-    { column: cosine, parameter: 0, values: ts.map((value) => -at.slope * value) },
-    { column: sine, parameter: 0, values: tc.map((value) => at.slope * value) },
-    { column: cosine, parameter: 1, values: tc.map((value) => -value) },
-    { column: sine, parameter: 1, values: ts.map((value) => -value) },
+function ringDownDerivatives(tS: Float64Array, { c, s }: { c: Float64Array; s: Float64Array }, at: BasisAt): BasisDerivative[] {
+  const { slope: bySlope, knocksS } = at;
+  const [cosineByOmega, sineByOmega, cosineByGamma, sineByGamma] = Array.from({ length: 4 }, () => new Float64Array(tS.length)) as [
+    Float64Array,
+    Float64Array,
+    Float64Array,
+    Float64Array,
   ];
-  const later = at.knocksS.flatMap((knockS, k) =>
+  for (let i = 0; i < tS.length; i += 1) {
+    const tc = (tS[i] as number) * (c[i] as number);
+    const ts = (tS[i] as number) * (s[i] as number);
+    cosineByOmega[i] = -bySlope * ts;
+    sineByOmega[i] = bySlope * tc;
+    cosineByGamma[i] = -tc;
+    sineByGamma[i] = -ts;
+  }
+  const first: BasisDerivative[] = [
+    { column: cosine, parameter: 0, values: cosineByOmega },
+    { column: sine, parameter: 0, values: sineByOmega },
+    { column: cosine, parameter: 1, values: cosineByGamma },
+    { column: sine, parameter: 1, values: sineByGamma },
+  ];
+  const later = knocksS.flatMap((knockS, k) =>
     first.map(({ column, parameter, values }) => ({ column: column + 2 * (k + 1), parameter, values: from(tS, knockS, values) })),
   );
   return [...first, ...later];

@@ -11,7 +11,7 @@ import { at, invertSymmetric, SingularMatrixError, solveSymmetric, type Matrix }
 export interface Basis {
   /** Columns of Φ; owned by the fit, which overwrites them. */
   columns: Float64Array[];
-  /** The columns of ∂Φ/∂α that are not zero; computed only where they are needed. */
+  /** The columns of ∂Φ/∂α that are not zero; computed only where they are needed, and before the columns are overwritten. */
   derivatives(): BasisDerivative[];
 }
 
