@@ -16,6 +16,7 @@ import { useHistoryKeys } from './use-editor-keys';
 import { useEditorState } from './use-editor-state';
 import { usePlan } from './use-plan';
 import { usePlanningRig } from './use-planning-rig';
+import { useSurroundings } from './use-surroundings';
 
 interface EditorProps {
   protocol: ProtocolView;
@@ -37,8 +38,9 @@ export function Editor({ protocol, etag }: EditorProps) {
   });
   useAdopted({ protocol, etag, sync, put: state.putDocument });
   const planning = usePlanningRig();
+  const surroundings = useSurroundings(planning.rig);
   const [startAt, setStartAt] = useState('');
-  const plan = usePlan({ document: state.document, rig: planning.rig?.document ?? null, timeZone, startAt });
+  const plan = usePlan({ document: state.document, rig: planning.rig?.document ?? null, surroundings, timeZone, startAt });
   const [sheet, setSheet] = useState<EditorSheet>(null);
   const { select } = state;
   const openDetails = useCallback((path: StepPath) => (wide ? focusDetails() : (select(path), setSheet('step'))), [wide, select]);

@@ -1,5 +1,6 @@
 import { stepsOfPlan, type StripStep } from '@/components/charts/strip-model';
 import { adviseProtocol } from '@/shared/protocol/advise';
+import type { Surroundings } from '@/shared/protocol/advise-surroundings';
 import { checkProtocol } from '@/shared/protocol/check';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { Finding } from '@/shared/protocol/finding';
@@ -39,6 +40,8 @@ export interface PlanInput {
   rig: RigDocument;
   timeZone: string;
   startUtcMs: number;
+  /** What else is known; absent: nothing is said of it. */
+  surroundings?: Surroundings;
 }
 
 /** Points of a predicted curve: one for each pixel of a wide strip is plenty. */
@@ -91,10 +94,10 @@ function timelineOf({ document, rig, timeZone, startUtcMs }: PlanInput, conditio
 
 /** Everything the editor shows of a draft. Never throws: what cannot be told of a draft is left out. */
 export function makePlan(input: PlanInput): Plan {
-  const { document, rig, timeZone, startUtcMs } = input;
+  const { document, rig, timeZone, startUtcMs, surroundings } = input;
   const timeline = timelineOf(input);
   const curve = orNull(() => predictDeflection(rig, timeline, curvePoints.full));
-  const start = { utcMs: startUtcMs, angleDeg: rig.motion?.homeDeg ?? 0, timeZone };
+  const start = { utcMs: startUtcMs, angleDeg: rig.motion?.homeDeg ?? 0, timeZone, ...surroundings };
   return {
     timeline,
     mostS: timelineOf(input, 'most').durationS,

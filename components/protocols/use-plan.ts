@@ -1,5 +1,6 @@
 import { useDeferredValue, useEffect, useMemo, useState } from 'react';
 import { serverNowMs } from '@/components/api';
+import type { Surroundings } from '@/shared/protocol/advise-surroundings';
 import { nextOccurrenceUtcMs } from '@/shared/protocol/local-time';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { RigDocument } from '@/shared/rig/document';
@@ -21,13 +22,14 @@ export function useMinute(): number {
 interface PlanInput {
   document: ProtocolDocument;
   rig: RigDocument | null;
+  surroundings: Surroundings;
   timeZone: string;
   /** Planned start as a time of day in the lab, `22:00`; empty for now. */
   startAt: string;
 }
 
 /** The plan of the draft, made anew at each change; typing stays ahead of it. */
-export function usePlan({ document, rig, timeZone, startAt }: PlanInput): Plan | null {
+export function usePlan({ document, rig, surroundings, timeZone, startAt }: PlanInput): Plan | null {
   const minute = useMinute();
   const deferred = useDeferredValue(document);
   const startUtcMs = useMemo(
@@ -35,7 +37,7 @@ export function usePlan({ document, rig, timeZone, startAt }: PlanInput): Plan |
     [minute, startAt, timeZone],
   );
   return useMemo(
-    () => (rig === null ? null : makePlan({ document: deferred, rig, timeZone, startUtcMs })),
-    [deferred, rig, timeZone, startUtcMs],
+    () => (rig === null ? null : makePlan({ document: deferred, rig, surroundings, timeZone, startUtcMs })),
+    [deferred, rig, surroundings, timeZone, startUtcMs],
   );
 }

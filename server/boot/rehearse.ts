@@ -9,7 +9,9 @@ import { NotYetError } from '@/shared/lib/not-yet-error';
 import { CODATA_2022_G } from '@/shared/physics/constants';
 import { oscillatorOf } from '@/shared/physics/oscillator';
 import { geometryOf } from '@/shared/physics/torque';
+import { excursionRefusals } from '@/shared/planning/excursion';
 import { checkProtocol } from '@/shared/protocol/check';
+import type { Finding } from '@/shared/protocol/finding';
 import { planTimeline } from '@/shared/protocol/timeline';
 import type { RigDocument } from '@/shared/rig/document';
 import { faultKinds, isFaultKind } from '../engine/rehearsal/rehearsal-faults';
@@ -126,9 +128,13 @@ function makeFolder(folder: string): void {
 /** What the protocol is refused for when it begins then, at the home edge, and a rehearsal that would fill the memory. */
 function assertRehearsable({ document, rig, startUtcMs, simulated }: Request): void {
   const start = { utcMs: startUtcMs, angleDeg: rig.motion?.homeDeg ?? 0 };
-  const refusals = checkProtocol(document, rig, start);
-  if (refusals.length > 0) throw new Unusable(`The protocol "${document.name}" is refused:\n${listed(refusals)}`);
-  const samples = planTimeline({ protocol: document, rig, timeZone: 'UTC' }, start).durationS * simulated.rateHz;
+  const refusedFor = (refusals: readonly Finding[]) => {
+    if (refusals.length > 0) throw new Unusable(`The protocol "${document.name}" is refused:\n${listed(refusals)}`);
+  };
+  refusedFor(checkProtocol(document, rig, start));
+  const timeline = planTimeline({ protocol: document, rig, timeZone: 'UTC' }, start);
+  refusedFor(excursionRefusals(rig, timeline));
+  const samples = timeline.durationS * simulated.rateHz;
   if (samples <= MOST_SAMPLES) return;
   throw new Unusable(
     `The rehearsal would leave ${Math.round(samples)} samples; at most ${MOST_SAMPLES} are written. Accepted is a --rate up to ${((simulated.rateHz * MOST_SAMPLES) / samples).toPrecision(2)}.`,

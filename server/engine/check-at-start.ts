@@ -1,6 +1,8 @@
 import type { RunStart } from '@/shared/archive/run-records';
+import { excursionRefusals } from '@/shared/planning/excursion';
 import { checkProtocol } from '@/shared/protocol/check';
 import type { Finding } from '@/shared/protocol/finding';
+import { planTimeline } from '@/shared/protocol/timeline';
 import type { RigDocument } from '@/shared/rig/document';
 import type { ControllerState } from '../interfaces/turntable-link';
 import { countingToleranceDeg } from './counted-angle';
@@ -13,7 +15,10 @@ export function checkAtStart(
 ): Finding[] {
   if (controller === null) return checkProtocol(protocol, rig);
   const angleDeg = controller.positionKnown && controller.angleDeg !== null ? withinLimits(controller.angleDeg, rig) : null;
-  return checkProtocol(protocol, rig, { angleDeg, utcMs, timeZone });
+  const start = { angleDeg, utcMs, timeZone };
+  const refusals = checkProtocol(protocol, rig, start);
+  if (refusals.length > 0) return refusals;
+  return excursionRefusals(rig, planTimeline({ protocol, rig, timeZone }, { utcMs, angleDeg: angleDeg ?? rig.motion?.homeDeg ?? 0 }));
 }
 
 /** A counted angle may lie half a step of the motor beyond the limit at which the sources were sent to stand. */

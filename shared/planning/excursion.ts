@@ -4,8 +4,82 @@ import { oscillatorOf } from '../physics/oscillator';
 import { Pendulum } from '../physics/pendulum';
 import { geometryOf } from '../physics/torque';
 import { trapezoid } from '../physics/trapezoid';
+import type { Finding } from '../protocol/finding';
 import type { Timeline, TimelineItem } from '../protocol/timeline';
 import type { RigDocument } from '../rig/document';
+
+/** Share of the free travel that a plan may use. */
+const travelShare = 0.8;
+
+/** How far the pendulum may swing out to either side, rad, and what says so; the rig's document may leave both out. */
+function excursionLimits({ pendulum, readout }: RigDocument): { name: string; limitRad: number }[] {
+  return [
+    {
+      name: `${travelShare} of pendulum.travel_rad`,
+      limitRad: pendulum.travel_rad === undefined ? undefined : travelShare * pendulum.travel_rad,
+    },
+    { name: 'readout.range_rad', limitRad: readout?.range_rad },
+  ].flatMap(({ name, limitRad }) => (limitRad === undefined ? [] : [{ name, limitRad }]));
+}
+
+/** One finding for each limit that the greatest excursion of a plan passes. */
+export function excursionFindings(rig: RigDocument, peakRad: number | null): Finding[] {
+  if (peakRad === null) return [];
+  return excursionLimits(rig)
+    .filter(({ limitRad }) => peakRad > limitRad)
+    .map(({ name, limitRad }) => ({
+      code: 'excursion',
+      path: null,
+      message: `The pendulum would swing out to ${(1000 * peakRad).toPrecision(3)} mrad, beyond ${name}, ${(1000 * limitRad).toPrecision(3)} mrad. Take a beat of whole periods, or smaller swings.`,
+    }));
+}
+
+/**
+ * Why a run that begins then and there is refused for the pendulum's sake: it would swing out too far. Where the greatest that the swings
+ * could add up to stays within the limits, the equation is not solved.
+ */
+export function excursionRefusals(rig: RigDocument, timeline: Pick<Timeline, 'items' | 'startUtcMs' | 'endUtcMs'>): Finding[] {
+  const limits = excursionLimits(rig);
+  if (limits.length === 0) return [];
+  const bound = excursionBoundRad(rig, timeline.items);
+  if (bound === null || limits.every(({ limitRad }) => bound <= limitRad)) return [];
+  return excursionFindings(rig, peakExcursionRad(rig, timeline));
+}
+
+/** What a move may leave beyond the difference of its equilibria: it passes the angle of greatest torque on its way. */
+const boundMargin = 1.5;
+
+/**
+ * More than the pendulum can swing out to: as if each move set it ringing by the whole difference of equilibria and all the ringing met in
+ * phase, rad. Null where nothing can be told.
+ */
+function excursionBoundRad(rig: RigDocument, items: readonly TimelineItem[]): number | null {
+  const oscillator = oscillatorOf(rig);
+  if (oscillator === null) return null;
+  // What these do in between is not told by where they begin and end.
+  if (items.some(({ kind }) => kind === 'kick' || kind === 'rotate')) return Infinity;
+  const geometry = geometryOf(rig);
+  const known = new Map<number, number>();
+  const restAt = (angleDeg: number): number => {
+    const found =
+      known.get(angleDeg) ??
+      equilibriumRad({ geometry, kappa: oscillator.kappa, bigG: CODATA_2022_G.value, phiRad: angleDeg * RAD_PER_DEG });
+    known.set(angleDeg, found);
+    return found;
+  };
+  let [ringing, atUtcMs, greatest] = [0, items[0]?.startUtcMs ?? 0, 0];
+  try {
+    for (const { angleFromDeg, angleToDeg, startUtcMs } of items) {
+      ringing *= Math.exp((-oscillator.gamma * (startUtcMs - atUtcMs)) / 1000);
+      atUtcMs = startUtcMs;
+      if (angleFromDeg !== angleToDeg) ringing += boundMargin * (Math.abs(restAt(angleFromDeg)) + Math.abs(restAt(angleToDeg)));
+      greatest = Math.max(greatest, ringing + Math.abs(restAt(angleToDeg)));
+    }
+  } catch {
+    return Infinity;
+  }
+  return greatest;
+}
 
 /** Looked at so often in a period. */
 const looksPerPeriod = 40;

@@ -3,9 +3,9 @@ import type { ProtocolDocument, RepeatStep, SettleStep, Step, WaitStep } from '.
 import type { Finding } from './finding';
 import { walkSteps } from './step-path';
 
-/** Advice that needs no plan in time: fields that do nothing, a start that is not homed, drivers that stay on. */
+/** Advice that needs no plan in time: fields that do nothing, a start that is not homed, drivers that stay on, an end that hangs on the result. */
 export function adviseDocument(document: ProtocolDocument, rig: RigDocument): Finding[] {
-  return [...withoutEffect(document), ...noHome(document), ...driversKept(document, rig)];
+  return [...withoutEffect(document), ...noHome(document), ...driversKept(document, rig), ...optionalStopping(document)];
 }
 
 /** Fields that the format allows and that do nothing beside the others. */
@@ -65,3 +65,24 @@ function driversKept({ atEnd }: ProtocolDocument, { motion }: RigDocument): Find
     },
   ];
 }
+
+/** A series that ends by its own scatter (physics.md L6). The standard deviation of n values is itself known to 1/√(2(n − 1)) (GUM, E.4.3). */
+function optionalStopping({ steps }: ProtocolDocument): Finding[] {
+  return [...walkSteps(steps)].flatMap(({ step, path }) => {
+    if (step.kind !== 'repeat' || step.until === undefined || !('relativeStatisticalU' in step.until)) return [];
+    const least = Math.max(2, step.atLeast ?? fewestPasses);
+    const known = Math.round(100 / Math.sqrt(2 * (least - 1)));
+    return [
+      {
+        code: 'optional-stopping',
+        path,
+        message:
+          `This repeat ends as soon as u so far comes down to ${(100 * step.until.relativeStatisticalU).toPrecision(2)} %, looked at from ${least} passes on, where u itself is known to ${known} % only: it tends to end where u has come out too small. ` +
+          'Where the result is to convince others, fix the number of passes with times.',
+      },
+    ];
+  });
+}
+
+/** Default of atLeast. */
+const fewestPasses = 20;

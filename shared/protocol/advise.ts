@@ -1,13 +1,15 @@
 import { oscillatorOf } from '../physics/oscillator';
+import { inflation } from '../planning/night-noise';
 import type { RigDocument } from '../rig/document';
 import { adviseDocument } from './advise-document';
+import { adviseSurroundings, type Surroundings } from './advise-surroundings';
 import type { ProtocolDocument } from './document';
 import { type Finding, withoutRepeats } from './finding';
 import { sideAt } from './stations';
 import { walkSteps } from './step-path';
 import { planTimeline, type TimelineItem } from './timeline';
 
-export interface AdviceStart {
+export interface AdviceStart extends Surroundings {
   utcMs: number;
   /** Turntable angle, deg. */
   angleDeg: number;
@@ -25,20 +27,23 @@ const shortestDwell = { alone: 1.25, withRingDown: 0.9 };
 const equalLengths = 0.05;
 
 /**
- * Where a protocol that can be carried out is weak: `cycle-pumps`, `dwell-short`, `unequal-sides`, `drift-not-cancelled`, `other-side`, and what
- * `adviseDocument` finds. Each message is two sentences, the number that triggered it and what would be better. Takes drafts; what cannot be told from them is left unsaid.
+ * Where a protocol that can be carried out is weak: `cycle-pumps`, `dwell-short`, `no-ring-down`, `unequal-sides`, `drift-not-cancelled`,
+ * `other-side`, and what `adviseDocument` and `adviseSurroundings` find. Each message is two sentences, the number that triggered it and what would be better. Takes drafts; what cannot be told from them is left unsaid.
  */
 export function adviseProtocol(document: ProtocolDocument, rig: RigDocument, start: AdviceStart): Finding[] {
-  const { items } = planTimeline({ protocol: document, rig, timeZone: start.timeZone ?? 'UTC' }, start);
+  const timeZone = start.timeZone ?? 'UTC';
+  const { items, startUtcMs, endUtcMs } = planTimeline({ protocol: document, rig, timeZone }, start);
   const hasRingDown = [...walkSteps(document.steps)].some(({ step }) => step.kind === 'kick');
   const sides = sidesOf(items, rig);
   return withoutRepeats([
     ...onePerStep(cyclePumps(items, rig)),
     ...onePerStep(dwellShort(items, rig, hasRingDown)),
+    ...(hasRingDown ? [] : noRingDown(sides, rig)),
     ...unequalSides(sides),
     ...driftNotCancelled(sides),
     ...onePerStep(otherSide(items, rig)),
     ...adviseDocument(document, rig),
+    ...adviseSurroundings(start, { startUtcMs, endUtcMs, timeZone, reverses: new Set(sides.map(({ side }) => side)).size > 1 }),
   ]);
 }
 
@@ -110,6 +115,28 @@ function dwellShort(items: readonly TimelineItem[], rig: RigDocument, hasRingDow
         `This dwell lasts ${durationS(item).toFixed(0)} s, ${(durationS(item) / periodS).toFixed(2)} periods, and below ${least} periods the centre of the swinging can hardly be told from the swinging itself. ` +
         `Make it at least ${(least * periodS).toFixed(0)} s long.`,
     }));
+}
+
+/** From this loss of u on a ring-down is worth its time: above what dwells of two periods lose (physics.md C4: √(1.2012/1.0089)). */
+const worthARingDown = 1.1;
+
+/** Reversals whose dwells have to tell period and decay as well, where that costs more than a tenth of u. */
+function noRingDown(dwells: readonly SideDwell[], rig: RigDocument): Finding[] {
+  const oscillator = oscillatorOf(rig);
+  const shortest = Math.min(...dwells.map((dwell) => dwell.durationS));
+  if (oscillator === null || new Set(dwells.map(({ side }) => side)).size < 2 || !(shortest > 0)) return [];
+  const [alone, calibrated] = [false, true].map((known) => inflation(oscillator, shortest, { calibrated: known, rings: true }));
+  const loss = Math.sqrt((alone as number) / (calibrated as number));
+  if (!(loss > worthARingDown)) return [];
+  return [
+    {
+      code: 'no-ring-down',
+      path: null,
+      message:
+        `Nothing kicks the pendulum, so period and decay come from dwells of ${(shortest / oscillator.periodS).toFixed(2)} periods alone, which makes the uncertainty of each ${loss.toPrecision(3)} times that with a ring-down. ` +
+        'Put a kick before the first pair and after the last, or make the dwells two periods long.',
+    },
+  ];
 }
 
 interface SideDwell {

@@ -1,5 +1,5 @@
 import { differenceU, inflation, type Cadence } from '@/shared/planning/night-noise';
-import { peakExcursionRad } from '@/shared/planning/excursion';
+import { excursionRefusals, peakExcursionRad } from '@/shared/planning/excursion';
 import { adviseNight } from '@/shared/planning/advise-night';
 import { predictU } from '@/shared/planning/plan-uncertainty';
 import { alternatives, cadenceOf } from '@/shared/planning/strategies';
@@ -138,6 +138,11 @@ test('swings at one and a half periods pump the pendulum: 2.24 steps of ringing 
   const tight = { ...demoRigWide, pendulum: { ...demoRigWide.pendulum, travel_rad: pumped } };
   expect(adviseNight(tight, { predicted: null, peakRad: pumped }).map(({ code }) => code)).toEqual(['excursion']);
   expect(adviseNight(tight, { predicted: null, peakRad: 0.7 * pumped })).toEqual([]);
+  // A run that would do so is refused, one that stays within 0.8 of the travel is not.
+  const refusals = (periods: number) => excursionRefusals(tight, timelineOf(tight, reversals(periods, 8))).map(({ code }) => code);
+  expect(refusals(1.5)).toEqual(['excursion']);
+  expect(refusals(2)).toEqual([]);
+  expect(excursionRefusals(demoRigWide, timelineOf(demoRigWide, reversals(1.5, 8)))).toEqual([]);
 });
 
 test('what cannot be told is null or empty', () => {

@@ -12,16 +12,17 @@ const document = (steps: Step[]): ProtocolDocument => ({ formatVersion: 1, name:
 const advice = (steps: Step[], rig: RigDocument = demoRigWide) =>
   adviseProtocol(document([{ kind: 'home' }, swing('near'), ...steps]), rig, { utcMs: 0, angleDeg: rig.motion?.homeDeg ?? 0 });
 const codes = (steps: Step[], rig?: RigDocument) => advice(steps, rig).map(({ code, path }) => `${code} ${path}`);
+const pumping = (steps: Step[]) => codes(steps).filter((code) => code.startsWith('cycle-pumps'));
 const pairs = (step: Step): Step[] => [{ kind: 'repeat', times: 6, steps: [swing('far'), step, swing('near'), step] }];
 
 describe('cycle-pumps', () => {
   // Design reference J2: at 1.5 T the ringing grows to 2.24 times a swing's, at 2 T and 1 T it stays below.
   test.each([1.31, 1.4, 1.5, 1.6, 1.69, 2.31, 2.5, 2.69, 3.5])('a beat of %p periods pumps', (periods) => {
-    expect(codes(pairs(beat(periods)))).toEqual(['cycle-pumps 3.repeat.2.dwell', 'cycle-pumps 3.repeat.4.dwell']);
+    expect(pumping(pairs(beat(periods)))).toEqual(['cycle-pumps 3.repeat.2.dwell', 'cycle-pumps 3.repeat.4.dwell']);
   });
 
   test.each([1.28, 1.29, 1.71, 2, 2.29, 2.71, 3])('a beat of %p periods does not', (periods) => {
-    expect(codes(pairs(beat(periods)))).toEqual([]);
+    expect(pumping(pairs(beat(periods)))).toEqual([]);
   });
 
   test('the swing counts: a dwell of 620 s after a swing of 9.7 s is a beat of 1.5 periods', () => {
@@ -94,6 +95,34 @@ describe('dwell-short', () => {
   });
 });
 
+describe('no-ring-down', () => {
+  test('dwells of one and a quarter periods lose a fifth of their u: √(1.5622/1.0698) in the table of C4', () => {
+    const [finding] = advice(pairs(dwell(1.25 * T))).filter(({ code }) => code === 'no-ring-down');
+    expect(finding?.message).toContain('dwells of 1.25 periods alone, which makes the uncertainty of each 1.21 times');
+  });
+
+  test('with a kick, at two periods, or on one side only there is nothing to say', () => {
+    expect(codes([{ kind: 'kick', amplitude_urad: 2000 }, ...pairs(beat(1))])).toEqual([]);
+    expect(codes(pairs(beat(2)))).toEqual([]);
+    expect(codes([dwell(525), dwell(525)])).not.toContain('no-ring-down null');
+  });
+});
+
+test('a repeat that ends by the u it has reached: u of 20 passes is known to 16 % (GUM, table E.1)', () => {
+  const until = (atLeast?: number): Step[] => [
+    {
+      kind: 'repeat',
+      until: { relativeStatisticalU: 0.001 },
+      atMost: 90,
+      ...(atLeast === undefined ? {} : { atLeast }),
+      steps: [swing('far'), beat(2), swing('near'), beat(2)],
+    },
+  ];
+  const messageOf = (atLeast?: number) => advice(until(atLeast)).find(({ code }) => code === 'optional-stopping')?.message;
+  expect(messageOf()).toContain('comes down to 0.10 %, looked at from 20 passes on, where u itself is known to 16 % only');
+  expect(messageOf(50)).toContain('from 50 passes on, where u itself is known to 10 % only');
+});
+
 describe('unequal-sides', () => {
   test('dwells of different lengths', () => {
     const [finding, ...others] = advice([{ kind: 'repeat', times: 4, steps: [swing('far'), dwell(830), swing('near'), dwell(1250)] }]);
@@ -149,10 +178,15 @@ test('each advice is two sentences', () => {
   const all = [
     ...advice(pairs(beat(1.5))),
     ...advice(pairs(beat(1))),
+    ...advice([
+      { kind: 'repeat', until: { relativeStatisticalU: 0.001 }, atMost: 40, steps: [swing('far'), beat(2), swing('near'), beat(2)] },
+    ]),
     ...advice([beat(2), swing('far'), beat(2)]),
     ...advice([dwell(900), swing('far'), dwell(1300), swing('near'), dwell(900)]),
   ];
-  expect(new Set(all.map(({ code }) => code))).toEqual(new Set(['cycle-pumps', 'dwell-short', 'drift-not-cancelled', 'unequal-sides']));
+  expect(new Set(all.map(({ code }) => code))).toEqual(
+    new Set(['cycle-pumps', 'dwell-short', 'no-ring-down', 'drift-not-cancelled', 'unequal-sides', 'optional-stopping']),
+  );
   for (const { message } of all) expect(message.match(/[a-z0-9][.](?= |$)/g)).toHaveLength(2);
 });
 

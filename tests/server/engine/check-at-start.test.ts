@@ -1,0 +1,21 @@
+import { checkAtStart } from '@/server/engine/check-at-start';
+import type { ProtocolDocument } from '@/shared/protocol/document';
+import { templateById } from '@/shared/protocol/templates';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+
+const protocol = templateById('near-far-short')?.make(demoRigWide) as ProtocolDocument;
+const codes = (rig: typeof demoRigWide, angleDeg: number | null = 0) =>
+  checkAtStart({ protocol, rig, timeZone: 'UTC' }, { positionKnown: angleDeg !== null, angleDeg }, 0).map(({ code }) => code);
+
+test('a run in which the pendulum would swing out beyond 0.8 of its travel, or leave the range of the readout, is refused', () => {
+  const within = (travel_rad: number) => ({
+    ...demoRigWide,
+    pendulum: { ...demoRigWide.pendulum, travel_rad },
+    readout: { range_rad: 0.03 },
+  });
+  // It rests at 1.19 mrad on either side, and each swing of 2.37 mrad carries it beyond.
+  expect(codes(within(0.0015))).toEqual(['excursion']);
+  expect(codes(within(0.0015), null)).toEqual(['excursion']);
+  expect(codes(within(0.05))).toEqual([]);
+  expect(codes({ ...within(0.05), readout: { range_rad: 0.0012 } })).toEqual(['excursion']);
+});
