@@ -16,9 +16,16 @@ module.exports = {
     {
       displayName: 'web',
       preset: 'jest-expo/web',
+      runtime: '<rootDir>/tests/support/jest/compiled-once-runtime.cjs',
+      transform: { '\\.[jt]sx?$': '<rootDir>/tests/support/jest/esbuild-transformer.cjs' },
       transformIgnorePatterns: webUntransformed,
       testMatch: ['<rootDir>/tests/components/**/*.test.tsx'],
-      moduleNameMapper: { ...alias, '\\.css$': '<rootDir>/tests/support/empty-module.js' },
+      moduleNameMapper: {
+        ...alias,
+        '\\.css$': '<rootDir>/tests/support/empty-module.js',
+        '^react-native$': 'react-native-web',
+        '^expo-router$': '<rootDir>/tests/components/support/fake-router',
+      },
       modulePathIgnorePatterns: ['<rootDir>/dist', '<rootDir>/.state'],
     },
     { ...node, displayName: 'e2e', testMatch: ['<rootDir>/tests/e2e/**/*.test.ts'] },

@@ -44,11 +44,7 @@ for (const report of [inBrowser, ...halves]) rmSync(report, { force: true });
 async function all() {
   const [checked, ...tested] = await Promise.all([
     standingBack(process.execPath, [join(root, 'scripts', 'check.mjs'), '--beside-tests'], { cwd: root }),
-    ensureWebBuild().then(() =>
-      jest(['--selectProjects', 'e2e-row', '-i'], inBrowser, (command, args, options) =>
-        pass(command, args, { ...options, env: { ...env, EVENFALL_SCREENS: 'failed' } }),
-      ),
-    ),
+    ensureWebBuild().then(() => jest(['--selectProjects', 'e2e-row', '-i'], inBrowser)),
     ...halves.map((report, k) =>
       jest(['--selectProjects', 'node', 'web', '-i', `--shard=${k + 1}/${halves.length}`], report, standingBack),
     ),

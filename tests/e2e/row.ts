@@ -3,13 +3,16 @@ import { join } from 'node:path';
 
 /**
  * All browser tests as one: each file would load the server and the browser's library anew, which costs more than many of them. A single one runs
- * by its name as always.
+ * by its name as always. Those that mostly wait for a line in real time come first, while the tests beside the row have work for the processors.
  */
 
 const suffix = '.test.ts';
-const files = readdirSync(__dirname).filter((name) => name.endsWith(suffix));
+const waiting = ['board', 'serial'];
+const files = readdirSync(__dirname)
+  .filter((name) => name.endsWith(suffix))
+  .map((name) => name.slice(0, -suffix.length));
 
-describe.each(files.map((name) => name.slice(0, -suffix.length)))('%s', (name) => {
+describe.each([...waiting, ...files.filter((name) => !waiting.includes(name))])('%s', (name) => {
   let startMs = 0;
   beforeAll(() => void (startMs = performance.now()));
   require(join(__dirname, `${name}${suffix}`));

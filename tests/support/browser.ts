@@ -1,6 +1,6 @@
-import { mkdirSync } from 'node:fs';
+import { mkdirSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
-import { chromium, type BrowserContext, type Page } from 'playwright-core';
+import { chromium, type BrowserContext, type CDPSession, type Page } from 'playwright-core';
 
 /** The two sizes every story is told at. */
 export const sizes = { phone: { width: 390, height: 844 }, wide: { width: 1280, height: 800 } } as const;
@@ -114,11 +114,15 @@ export async function openBrowser(baseURL: string, size: Size, installs = false)
   };
 }
 
-/** Keeps a picture of the page as test output. Where all tests run nobody looks at 300 of them: only those of failures are kept. */
-export async function shoot(browser: Browser, name: string): Promise<void> {
-  if (process.env.EVENFALL_SCREENS === 'failed' && name !== 'failed') return;
+const cameras = new WeakMap<Page, Promise<CDPSession>>();
+
+/** Keeps a picture of the page as test output: some hundreds in a whole run, so each is taken at once and packed lightly. */
+export async function shoot({ page, context, size }: Browser, name: string): Promise<void> {
+  const camera = cameras.get(page) ?? context.newCDPSession(page);
+  cameras.set(page, camera);
+  const { data } = await (await camera).send('Page.captureScreenshot', { format: 'png', optimizeForSpeed: true });
   mkdirSync(screens, { recursive: true });
-  await browser.page.screenshot({ path: join(screens, `${name}-${browser.size}.png`) });
+  writeFileSync(join(screens, `${name}-${size}.png`), Buffer.from(data, 'base64'));
 }
 
 /** Makes a picture of the documents anew, where that is asked for: a usual run leaves the tree as it is. */

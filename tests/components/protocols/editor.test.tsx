@@ -2,7 +2,6 @@ import { act, fireEvent, screen } from '@testing-library/react';
 import { afterQuiet, begun, key, openEditor, protocolPath, row, tap, titles } from '../support/editor-page';
 import { problem } from '../support/fake-lab';
 
-jest.mock('expo-router', () => jest.requireActual('../support/fake-router'));
 
 beforeEach(() => {
   window.localStorage.clear();

@@ -7,7 +7,6 @@ import { params, went } from '../support/fake-router';
 import { startFakeStream } from '../support/fake-stream';
 import { problem, settled, showInLab, startFakeLab, type FakeLab } from '../support/fake-lab';
 
-jest.mock('expo-router', () => jest.requireActual('../support/fake-router'));
 
 const live = {
   condition: 'closed',

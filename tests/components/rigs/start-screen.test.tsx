@@ -7,7 +7,6 @@ import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { params, went } from '../support/fake-router';
 import { problem, showInLab, startFakeLab, type FakeLab } from '../support/fake-lab';
 
-jest.mock('expo-router', () => jest.requireActual('../support/fake-router'));
 
 const live = {
   condition: 'ready',
