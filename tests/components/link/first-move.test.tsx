@@ -10,7 +10,6 @@ import { params } from '../support/fake-router';
 import { problem, settled, showInLab, startFakeLab, type FakeLab } from '../support/fake-lab';
 import { startFakeStream, type FakeStream } from '../support/fake-stream';
 
-
 const path = '/labs/lab-1/rigs/rig-1';
 const at = '2031-03-14T20:00:00.000Z';
 const arm = { id: 'arm-1', name: 'Ada Thornfield', from: at, until: '2031-03-15T12:00:00.000Z', note: '' };

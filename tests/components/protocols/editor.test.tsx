@@ -2,7 +2,6 @@ import { act, fireEvent, screen } from '@testing-library/react';
 import { afterQuiet, begun, key, openEditor, protocolPath, row, tap, titles } from '../support/editor-page';
 import { problem } from '../support/fake-lab';
 
-
 beforeEach(() => {
   window.localStorage.clear();
   jest.useFakeTimers();

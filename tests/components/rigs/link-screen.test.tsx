@@ -7,7 +7,6 @@ import { params, went } from '../support/fake-router';
 import { startFakeStream } from '../support/fake-stream';
 import { problem, settled, showInLab, startFakeLab, type FakeLab } from '../support/fake-lab';
 
-
 const live = {
   condition: 'closed',
   detail: '',

@@ -7,7 +7,6 @@ import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { params, went } from '../support/fake-router';
 import { problem, showInLab, startFakeLab, type FakeLab } from '../support/fake-lab';
 
-
 const live = {
   condition: 'ready',
   detail: '',
