@@ -1,4 +1,5 @@
 import { formatSignificant } from '@/shared/lib/format-number';
+import { registeredDifferences } from '@/shared/evaluation/registered-differences';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { RigDocument } from '@/shared/rig/document';
@@ -25,14 +26,7 @@ export function registeredWords(
   if (result.registered === null) return { words: 'no evaluation was registered', differs: false };
   if (result.registered) return { words: 'as registered', differs: false };
   const registered = protocol?.evaluation;
-  const differences = [
-    registered?.method !== undefined && registered.method !== result.method
-      ? `method ${result.method}, registered ${registered.method}`
-      : '',
-    registered?.channel !== undefined && channel !== null && registered.channel !== channel
-      ? `channel ${channel}, registered ${registered.channel}`
-      : '',
-  ].filter(Boolean);
+  const differences = registered === undefined ? [] : registeredDifferences(registered, { method: result.method, channel });
   return { words: `not as registered${differences.length === 0 ? '' : `: ${differences.join('; ')}`}`, differs: true };
 }
 

@@ -17,7 +17,7 @@ import type { ControlResult, DwellResult, EvaluationResult, FitCurve } from './r
 import { isMember, type Reversal } from './reversal';
 import { centreOf } from './ring-down-fit';
 import { NoSolutionError } from './solve-g';
-import { hasSwings, warningsOf } from './warnings';
+import { hasSwings, registrationWarnings, warningsOf } from './warnings';
 
 export interface Evaluation {
   result: EvaluationResult;
@@ -41,7 +41,7 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
   const result: EvaluationResult = {
     formatVersion: 1,
     method: plan.method,
-    registered: plan.registered,
+    registered: plan.differences === null ? null : plan.differences.length === 0,
     chain: archive.chain,
     alignment: alignmentOf(analysis),
     period_s: withU(free.period),
@@ -58,7 +58,7 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     budget: budget?.lines ?? null,
     monteCarlo: trialModel === null ? null : monteCarlo(trialModel, options.trials ?? 0),
     ...(hasSwings(archive) ? {} : { pretend: pretendOf(analysis) }),
-    warnings: [...archive.warnings, ...warningsOf(archive, analysis)],
+    warnings: [...archive.warnings, ...registrationWarnings(archive, plan), ...warningsOf(archive, analysis)],
   };
   return { result, curves: curvesOf(analysis), trialModel };
 }

@@ -2,6 +2,7 @@ import type { Archive } from '../archive/read-archive';
 import { listOf } from '../archive/read-archive';
 import { UnusableArchive } from '../archive/unusable-archive';
 import { NotYetError } from '../lib/not-yet-error';
+import { registeredDifferences } from './registered-differences';
 
 export type EvaluationMethod = 'equilibrium' | 'period' | 'acceleration' | 'modulation';
 export const evaluationMethods: readonly EvaluationMethod[] = ['equilibrium', 'period', 'acceleration', 'modulation'];
@@ -15,14 +16,14 @@ export interface EvaluationOptions {
   trials?: number;
 }
 
-/** What is to be done, and whether that is what the protocol registered beforehand. */
+/** What is to be done, and how far that is what the protocol registered beforehand. */
 export interface EvaluationPlan {
   method: EvaluationMethod;
   drift: 'aba' | 'polynomial' | 'gls';
   order: number;
   channel: string;
-  /** Null where nothing was registered. */
-  registered: boolean | null;
+  /** In words, how this differs from what was registered; null where nothing was registered. */
+  differences: string[] | null;
 }
 
 /**
@@ -36,9 +37,8 @@ export function evaluationPlan(archive: Archive, options: EvaluationOptions): Ev
     throw new NotYetError('the method "modulation" is not built yet; "equilibrium", "acceleration" and "period" are');
   const drift = registered?.drift ?? 'aba';
   const channel = chooseChannel(archive, options.channel ?? registered?.channel ?? null);
-  const asRegistered =
-    method === (registered?.method ?? 'equilibrium') && (registered?.channel === undefined || registered.channel === channel);
-  return { method, drift, order: registered?.order ?? 1, channel, registered: registered === null ? null : asRegistered };
+  const differences = registered === undefined || registered === null ? null : registeredDifferences(registered, { method, channel });
+  return { method, drift, order: registered?.order ?? 1, channel, differences };
 }
 
 function chooseChannel(archive: Archive, wanted: string | null): string {

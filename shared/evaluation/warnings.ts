@@ -3,6 +3,7 @@ import type { ArchiveWarning } from '../archive/archive-types';
 import { RAD_PER_DEG } from '../physics/constants';
 import { geometryOf, torquePerG } from '../physics/torque';
 import type { Analysis } from './analysis';
+import type { EvaluationPlan } from './registration';
 
 /** From this many near and far dwells on their scatter says something. */
 const enoughDwells = 6;
@@ -43,6 +44,23 @@ export function warningsOf(archive: Archive, { reversal, free, solution, clockOf
     warnings.push({
       code: 'sign',
       message: 'Near minus far has the wrong sign, so G came out negative: look at lever.sense and at the stations.',
+    });
+  }
+  return warnings;
+}
+
+/** Where the evaluation is not, or not only, what was decided before the data were seen. */
+export function registrationWarnings({ exclusions }: Archive, { differences }: Pick<EvaluationPlan, 'differences'>): ArchiveWarning[] {
+  if (differences === null) return [];
+  const warnings: ArchiveWarning[] = [];
+  if (differences.length > 0)
+    warnings.push({ code: 'not-as-registered', message: `The evaluation is not the registered one: ${differences.join('; ')}.` });
+  if (exclusions.length > 0) {
+    const stretches = exclusions.length === 1 ? 'one stretch' : `${exclusions.length} stretches`;
+    const seconds = exclusions.reduce((sum, { startUtcMs, endUtcMs }) => sum + (endUtcMs - startUtcMs) / 1000, 0);
+    warnings.push({
+      code: 'excluded-by-hand',
+      message: `Beside the registered rules the samples of ${stretches}, ${seconds.toFixed(0)} s together, were excluded by hand (exclusions.csv).`,
     });
   }
   return warnings;

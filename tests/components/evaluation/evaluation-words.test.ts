@@ -17,6 +17,11 @@ test('what was registered is said, and how the result differs from it', () => {
     words: 'not as registered: channel spot, registered deflection',
     differs: true,
   });
+  // The registered method is equilibrium where none is named.
+  const unnamed = { ...protocol, evaluation: { drift: 'aba' as const } };
+  expect(registeredWords({ registered: false, method: 'period' }, unnamed, null).words).toBe(
+    'not as registered: method period, registered equilibrium',
+  );
   expect(registeredWords({ registered: null, method: 'equilibrium' }, protocol, null).words).toBe('no evaluation was registered');
 });
 

@@ -31,7 +31,23 @@ describe('the channel', () => {
     );
     const protocol = { formatVersion: 1 as const, name: 'x', steps: [{ kind: 'home' as const }], evaluation: { channel: 'deflection' } };
     expect(evaluateRecords({ ...two, protocol }).result.registered).toBe(true);
-    expect(evaluateRecords({ ...two, protocol }, { channel: 'camera' }).result.registered).toBe(false);
+    const exclusions = [
+      { startUtcMs: records.run.startedAtUtcMs as number, endUtcMs: (records.run.startedAtUtcMs as number) + 8000, reason: '' },
+    ];
+    const other = evaluateRecords({ ...two, protocol, exclusions }, { channel: 'camera' }).result;
+    expect(other.registered).toBe(false);
+    expect(other.warnings).toEqual(
+      expect.arrayContaining([
+        {
+          code: 'not-as-registered',
+          message: 'The evaluation is not the registered one: channel camera, registered deflection.',
+        },
+        {
+          code: 'excluded-by-hand',
+          message: 'Beside the registered rules the samples of one stretch, 8 s together, were excluded by hand (exclusions.csv).',
+        },
+      ]),
+    );
   });
 
   test.each([
