@@ -42,7 +42,7 @@ process.on('SIGINT', end);
 process.on('SIGTERM', end);
 process.on('SIGHUP', end);
 
-const ended = new Promise((resolve) => server.on('close', resolve));
+const ended = new Promise((resolve) => server.on('close', (code, signal) => resolve(code ?? signal)));
 const listening = new Promise((resolve) => {
   createInterface({ input: server.stdout }).on('line', (line) => {
     const said = parse(line);
@@ -57,7 +57,7 @@ const code = await ended;
 await cluster.stop();
 rmSync(lock, { force: true });
 if (!ending) say(`The server ended by itself (${code}); its last words are above.`);
-process.exit(ending ? 0 : (code ?? 1));
+process.exit(ending ? 0 : typeof code === 'number' ? code : 1);
 
 function welcome({ listening: address, signIns = [], mailbox }) {
   say(`\nEvenfall is at ${address}\n`);

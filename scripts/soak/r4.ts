@@ -4,7 +4,6 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { Client } from 'pg';
 import { connect } from '@/db/connect';
-import { demoIds } from '@/db/demo/seed';
 import { migrateToLatest } from '@/db/migrate';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import { verifyChain } from '@/shared/archive/chain';
@@ -79,7 +78,7 @@ async function round(asked: Asked, database: CrashingDatabase, of: { number: num
     await pause(100);
   }
   if (!holds) return;
-  await lab.post(`/labs/${demoIds.lab}/runs/${runId}/resume`, { tappedAt: new Date().toISOString() });
+  await lab.resume(runId);
 }
 
 async function rounds(setting: ServerSetting, cookie: string, of: { database: CrashingDatabase; count: number }): Promise<Findings> {

@@ -54,7 +54,8 @@ async function round(night: RealNight, { number, servers, takeoversS }: Round): 
     else takeoversS.push((performance.now() - beganMs) / 1000);
   };
   let left = servers;
-  switch (deeds[number % deeds.length]) {
+  const deed = deeds[number % deeds.length] ?? 'cut';
+  switch (deed) {
     case 'freeze': {
       const frozenS = 1 + ((number * 0.414) % 1) * 9;
       driver.signal('SIGSTOP');
@@ -73,10 +74,11 @@ async function round(night: RealNight, { number, servers, takeoversS }: Round): 
       controller.cutAll();
   }
   const next = await driverOf(left, night);
-  await new LabClient(next.address, cookie).until(
-    runId,
-    ({ state, lastSeq, current }) => state === 'running' && lastSeq > last && current !== null,
-  );
+  await new LabClient(next.address, cookie)
+    .until(runId, ({ state, lastSeq, current }) => state === 'running' && lastSeq > last && current !== null)
+    .catch((error: Error) => {
+      throw new Error(`after ${deed} in round ${number}: ${error.message}: ${String(error.cause)}`);
+    });
   return left;
 }
 

@@ -7,6 +7,8 @@ import { unfinishedRuns } from '../store/runs-read';
 import type { RigSide } from './build-rigs';
 import type { RigKey } from './lease-keeper';
 
+const AGAIN_MS = 1_000;
+
 /** How a process comes to drive rigs: at its start those that nobody drives, later those whose driver is gone. */
 export class RigTaking {
   /** One rig after the other: each reads the unfinished runs. */
@@ -22,11 +24,18 @@ export class RigTaking {
     return this.inTurn(() => this.take(rigs));
   }
 
-  /** The lease of a rig that was waited for is this process's now. */
+  /** The lease of a rig that was waited for is this process's now. A database that goes away meanwhile is asked again: nobody else would take it up. */
   takenOver({ labId, rigId }: RigKey): Promise<void> {
+    const { services, side } = this;
     return this.inTurn(async () => {
-      const rig = await findRig(this.services.database.db, labId, rigId);
-      if (rig !== null) await this.take([rig]);
+      if (!side.leases.holds(rigId)) return;
+      try {
+        const rig = await findRig(services.database.db, labId, rigId);
+        if (rig !== null) await this.take([rig]);
+      } catch (error) {
+        services.clock.after(AGAIN_MS, () => services.background(this.takenOver({ labId, rigId }), 'taking a rig over'));
+        throw error;
+      }
     });
   }
 

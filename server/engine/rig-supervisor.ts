@@ -63,6 +63,10 @@ const hasEnded = ({ snapshot, chartVersion }: StoredRun) => {
   return found !== null && isRunOver(found);
 };
 
+/** A run that nobody drove for longer is not resumed by itself, ms. */
+const MERGE_PATIENCE_MS = 600_000;
+const LONGEST_PAUSE_MS = 5_000;
+
 export type SupervisorListener = (driver: RunDriver, change: RunChange) => void;
 
 /** Owns the drivers: one run to a rig, unfinished ones taken up at boot. */
@@ -70,6 +74,7 @@ export class RigSupervisor {
   private readonly byRig = new Map<string, RunDriver>();
   private readonly quarantine = new Map<string, QuarantinedRun>();
   private readonly listeners = new Set<SupervisorListener>();
+  private closed = false;
 
   constructor(private readonly parts: SupervisorParts) {}
 
@@ -84,10 +89,12 @@ export class RigSupervisor {
       const { start } = found;
       if (!isOurs(start.rigId) || this.byRig.has(start.rigId)) continue;
       const { stored, why: unread } = await this.withJournal(found);
+      if (this.closed) break;
       const why = unread ?? this.unfitness(stored);
       if (why !== null) quarantined.push({ start, why });
       else if (!hasEnded(stored)) taken.push(this.drive(start, stored, this.parts.linkOf(start.rigId) as TurntableLink));
     }
+    if (this.closed) return { taken: [], quarantined: [] };
     for (const run of quarantined) this.quarantine.set(run.start.rigId, run);
     for (const driver of taken) driver.recover();
     return { taken, quarantined };
@@ -195,6 +202,7 @@ export class RigSupervisor {
 
   /** Lets go of all runs without touching them; the next process takes them up. */
   close(): void {
+    this.closed = true;
     for (const driver of this.byRig.values()) driver.close();
     this.byRig.clear();
   }
@@ -207,14 +215,28 @@ export class RigSupervisor {
     try {
       const writes = await journal.read();
       if (writes.length === 0) return { stored, why: null };
-      await mergeWrites(store, withAllToPerform(writes));
+      await this.patiently(() => mergeWrites(store, withAllToPerform(writes)));
       await journal.clear();
     } catch (error) {
       if (!(error instanceof StaleRunError)) return { stored, why: error instanceof Error ? error.message : String(error) };
       const aside = await journal.setAside();
       onError?.(new Error(`${error.message}; what this server had kept of it meanwhile lies in ${aside}`), start);
     }
-    return { stored: (await store.load(start.labId, start.runId)) ?? stored, why: null };
+    return { stored: (await this.patiently(() => store.load(start.labId, start.runId))) ?? stored, why: null };
+  }
+
+  /** A database that goes away again at this very moment blocks no rig: nothing moves, and what it did not answer is tried again. */
+  private async patiently<T>(work: () => Promise<T>): Promise<T> {
+    const { clock } = this.parts;
+    const sinceMs = clock.monotonicMs();
+    for (let turn = 0; ; turn += 1) {
+      try {
+        return await work();
+      } catch (error) {
+        if (error instanceof StaleRunError || this.closed || clock.monotonicMs() - sinceMs > MERGE_PATIENCE_MS) throw error;
+        await new Promise<void>((resolve) => void clock.after(Math.min(100 * 2 ** turn, LONGEST_PAUSE_MS), resolve));
+      }
+    }
   }
 
   private unfitness({ start, chartVersion, snapshot }: StoredRun): string | null {

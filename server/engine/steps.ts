@@ -35,7 +35,6 @@ export function chooseNext(draft: Draft): void {
   context.moveRetries = 0;
   for (;;) {
     const next = nextItem(draft, { cursor: context.cursor, moment: cursorMoment(draft) });
-    context.dwellJustNotGood = false;
     if (next === null) {
       context.next = 'failed';
       return;
@@ -51,6 +50,8 @@ export function chooseNext(draft: Draft): void {
       return;
     }
     context.cursor = cursor;
+    // Not before: a hold between two steps must not make a pass good that was not.
+    context.dwellJustNotGood = false;
     if (item.step.kind === 'mark') writeMark(draft, item);
     else if (item.step.kind === 'proof') {
       const halt = runProof(draft, item);

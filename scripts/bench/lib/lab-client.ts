@@ -87,10 +87,17 @@ export class LabClient {
     return this.post(`${runs}/${runId}/${what}`, {});
   }
 
+  /** Resumes as a person does, who has seen the review of it. */
+  async resume(runId: string): Promise<void> {
+    const { token: reviewToken } = (await this.post(`${runs}/${runId}/resume-review`, {})).body as { token: string };
+    await this.post(`${runs}/${runId}/resume`, { reviewToken, tappedAt: new Date().toISOString() });
+  }
+
   until(runId: string, there: (view: RunView) => boolean): Promise<RunView> {
     return this.patiently('a run', async () => {
       const view = await this.run(runId);
-      return there(view) ? view : null;
+      if (there(view)) return view;
+      throw new Error(`it is ${view.state}: ${view.reason}`);
     });
   }
 
@@ -137,7 +144,11 @@ export class LabClient {
           });
         },
       );
-      asked.on('error', reject);
+      asked.on('error', (error) => {
+        // The server had closed the idle connection at that very moment; to look again does no harm.
+        if (method === 'GET' && asked.reusedSocket) this.ask({ method, path, headers }).then(resolve, reject);
+        else reject(error);
+      });
       asked.end(text);
     });
   }

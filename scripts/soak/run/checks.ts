@@ -64,7 +64,7 @@ const restsAfterHazard: Check = ({ world: { witness } }) => {
 /** When all is well again a run has decided: it goes on, is held or is over; and the last stop ends it. */
 const comesToAnEnd: Check = ({ healed, world, stoodDeg }) => {
   if (['interrupted', 'holding', 'stopping', 'starting'].includes(healed)) return `with everything well again the run is still ${healed}`;
-  if (!world.driver.isOver()) return `after the last stop the run is ${world.driver.state().state}`;
+  if (!world.over) return `after the last stop the run is ${world.state}`;
   return stoodDeg[0] === stoodDeg[1] ? null : `the table moved from ${stoodDeg[0]} to ${stoodDeg[1]} deg after the end`;
 };
 

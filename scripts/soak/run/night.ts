@@ -247,14 +247,14 @@ export async function runNight(seed: number): Promise<Night> {
       done.push(`${world.nowMs.toFixed(0)} ms: ${name} ${deeds[name]?.(world, { between: draw, upTo: (greatest) => draw(0, greatest) })}`);
     });
   }
-  await world.clock.advance(TROUBLE_MS, () => world.alive && world.driver.isDone());
+  await world.clock.advance(TROUBLE_MS, () => world.alive && world.done);
   world.heal();
-  await world.clock.advance(HEALING_MS, () => world.alive && restful.includes(world.driver.state().state));
+  await world.clock.advance(HEALING_MS, () => world.alive && restful.includes(world.state));
   await world.comeBack();
   await world.clock.advance(5_000);
-  const healed = world.driver.state().state;
+  const healed = world.state;
   world.halt('stop');
-  await world.clock.advance(120_000, () => world.driver.isDone());
+  await world.clock.advance(120_000, () => world.done);
   await world.clock.advance(3_000);
   const stood = world.angleDeg();
   await world.clock.advance(3_000);

@@ -57,6 +57,11 @@ export class SimulatedStore implements RunStore {
     throw new Error('the connection broke before the answer');
   }
 
+  /** Of the run, as stored. */
+  state(): string | null {
+    return this.stored === null ? null : (JSON.parse(this.stored) as { snapshot: { state: string } }).snapshot.state;
+  }
+
   private head(): ChainHead {
     return this.events.at(-1) ?? emptyChain;
   }
@@ -99,6 +104,8 @@ export class World {
   private supervisor: RigSupervisor | null = null;
   private last: RunDriver | null = null;
   private epoch = 0;
+  /** State of the run as the next process found it, which had nothing to take up. */
+  private endedBefore: string | null = null;
   /** Sends of the present process, counted down to its death; below 0: it lives. */
   private dieAtSend = -1;
 
@@ -125,6 +132,23 @@ export class World {
   get driver(): RunDriver {
     if (this.last === null) throw new Error('the night has not begun');
     return this.last;
+  }
+
+  /** Where the run stands; of one that had ended when its driver died, as the database has it. */
+  get state(): string {
+    return this.endedBefore ?? this.driver.state().state;
+  }
+
+  get over(): boolean {
+    return this.hadEnded || this.driver.isOver();
+  }
+
+  get done(): boolean {
+    return this.hadEnded || this.driver.isDone();
+  }
+
+  private get hadEnded(): boolean {
+    return this.endedBefore !== null && ['finished', 'stopped', 'failed'].includes(this.endedBefore);
   }
 
   get alive(): boolean {
@@ -165,11 +189,12 @@ export class World {
     const supervisor = this.openServer();
     const { taken } = await supervisor.recover();
     if (taken[0] !== undefined) this.follow(taken[0]);
+    else if (this.supervisor === supervisor) this.endedBefore = this.store.state();
   }
 
   /** A person asks; it counts from the moment at which it was answered. */
   halt(kind: 'hold' | 'stop'): void {
-    if (!this.alive) return;
+    if (!this.alive || this.hadEnded) return;
     const answer = this.driver[kind]('Ben');
     if (!answer.ok) return;
     const process = this.epoch;

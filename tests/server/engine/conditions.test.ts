@@ -180,6 +180,18 @@ describe('dwells that are not good', () => {
     expect(Math.max(...beats) - Math.min(...beats)).toBeLessThan(1);
   });
 
+  test('a hold after the last dwell of a pass makes no good pass of it', async () => {
+    const bench = await running(judged({ kind: 'repeat', times: 2, counting: 'good', atMost: 3, steps: pair }), hot(100, 110));
+    await bench.pass(200, () => bench.driver.facts().current?.path.endsWith('repeat[1].4.dwell') === true);
+    bench.driver.holdAfterDwell('Ben');
+    await bench.pass(120, () => state(bench) === 'held');
+    expect(dwells(bench).map(({ good }) => good)).toEqual([true, false]);
+    expect(await bench.driver.resume('Ben')).toMatchObject({ ok: true });
+    await bench.pass(1000);
+    expect(state(bench)).toBe('finished');
+    expect(dwells(bench).map(({ good }) => good)).toEqual([true, false, true, true, true, true]);
+  });
+
   test('at most so many passes are made', async () => {
     const bench = await running(judged({ kind: 'repeat', times: 2, counting: 'good', atMost: 3, steps: pair }), hot(0, 1e9));
     await bench.pass(1000);

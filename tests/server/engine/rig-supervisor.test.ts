@@ -136,6 +136,32 @@ test.each([
   });
 });
 
+test('a database that goes away again while the next process brings a journal in blocks no rig: the run is taken up when it is back', async () => {
+  const lab = makeLab();
+  const [first, start] = [lab.newSupervisor(), lab.make()];
+  first.startRun(start);
+  await lab.clock.advance(20_000);
+  const store = lab.runs.byId.get(start.runId) as MemoryStore;
+  const head = store.events.length;
+  store.fault = () => 'away';
+  first.activeOf(start.rigId)?.hold('Ben');
+  await lab.clock.advance(5_000);
+  first.close();
+  expect(await lab.journals.of(start).read()).not.toEqual([]);
+  const next = lab.newSupervisor();
+  const recovered = next.recover();
+  await lab.clock.advance(60_000);
+  expect(next.activeOf(start.rigId)).toBeNull();
+  store.fault = () => 'answer-lost';
+  await lab.clock.advance(6_000);
+  store.fault = () => 'none';
+  await lab.clock.advance(6_000);
+  expect(await recovered).toMatchObject({ taken: [{ runId: start.runId }], quarantined: [] });
+  await lab.clock.advance(2_000);
+  expect(store.events.slice(head).map(({ kind }) => kind)).toContain('hold-requested');
+  expect(next.activeOf(start.rigId)?.facts().state).toBe('held');
+});
+
 describe('a protocol that does not home', () => {
   const unhomed = { ...shortProtocol, steps: shortProtocol.steps.slice(1) };
   const start = (angleDeg: number | null, more: Partial<RunStart> = {}) => {
