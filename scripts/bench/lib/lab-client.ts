@@ -17,11 +17,12 @@ const patienceMs = 30_000;
 
 export const pause = (ms: number): Promise<void> => new Promise((resolve) => void setTimeout(resolve, ms));
 
-/** A member of the demo lab at a server's address. Every request that is refused throws the server's own words. */
+/** A member of the demo lab at a server's address, at one of its rigs. Every request that is refused throws the server's own words. */
 export class LabClient {
   constructor(
     readonly address: string,
     readonly cookie: string,
+    private readonly rig: { id: string; massSetId: string } = { id: demoIds.rig, massSetId: demoIds.massSet },
   ) {}
 
   get(path: string): Promise<Answer> {
@@ -32,11 +33,11 @@ export class LabClient {
     return this.ask({ method: 'POST', path, body, headers });
   }
 
-  /** Makes a protocol and issues its first revision on the demo rig. Returns its id. */
+  /** Makes a protocol and issues its first revision on the client's rig. Returns its id. */
   async issue(document: ProtocolDocument): Promise<string> {
     const made = await this.post(`/labs/${demoIds.lab}/protocols`, { document });
     const { id } = made.body as { id: string };
-    await this.post(`/labs/${demoIds.lab}/protocols/${id}/revisions`, { rigId: demoIds.rig }, { 'If-Match': made.etag });
+    await this.post(`/labs/${demoIds.lab}/protocols/${id}/revisions`, { rigId: this.rig.id }, { 'If-Match': made.etag });
     return id;
   }
 
@@ -48,8 +49,8 @@ export class LabClient {
     turnKey,
     patienceMs: patience = patienceMs,
   }: { turnKey?: (on: boolean) => Promise<void>; patienceMs?: number } = {}): Promise<void> {
-    const rig = `/labs/${demoIds.lab}/rigs/${demoIds.rig}`;
-    await this.patiently('the link of the demo rig', async () => {
+    const rig = `/labs/${demoIds.lab}/rigs/${this.rig.id}`;
+    await this.patiently('the link of the rig', async () => {
       const { live } = (await this.get(rig)).body as { live: { condition: string } };
       return live.condition === 'ready' || null;
     });
@@ -66,13 +67,13 @@ export class LabClient {
     await this.patiently('the exit delay', async () => ((await this.get(rig)).body as { arm: object | null }).arm, patience);
   }
 
-  /** Starts the first revision of a protocol on the demo rig as soon as the server lets it, and waits until it runs. Returns the run's id. */
+  /** Starts the first revision of a protocol on the client's rig as soon as the server lets it, and waits until it runs. Returns the run's id. */
   async start(protocolId: string): Promise<string> {
-    const choice = { protocolId, revision: 1, massSetId: demoIds.massSet };
+    const choice = { protocolId, revision: 1, massSetId: this.rig.massSetId };
     const start = async () => {
-      const review = await this.post(`/labs/${demoIds.lab}/rigs/${demoIds.rig}/start-review`, choice);
+      const review = await this.post(`/labs/${demoIds.lab}/rigs/${this.rig.id}/start-review`, choice);
       const { token: reviewToken } = review.body as { token: string };
-      return this.post(runs, { rigId: demoIds.rig, ...choice, reviewToken, tappedAt: new Date().toISOString() });
+      return this.post(runs, { rigId: this.rig.id, ...choice, reviewToken, tappedAt: new Date().toISOString() });
     };
     const { id } = (await this.patiently('a start', start)).body as { id: string };
     await this.until(id, ({ state }) => state === 'running');
