@@ -4,6 +4,7 @@ import type { RigDocument } from '../rig/document';
 import type { Sha256OfBytes } from './archive-types';
 import { appendEvent, canonicalJson, emptyChain } from './chain';
 import { channelCsv, channelPath } from './channel-csv';
+import { citationText, crateMetadata, type DescribedRun } from './describe-archive';
 import { exclusionsCsv, exclusionsFile, type Exclusion } from './exclusions';
 import type { ChainedEvent, ChannelSeries, SimulatedRun, StepRow } from './run-records';
 import { stepsCsv, stepsFile } from './step-csv';
@@ -41,7 +42,8 @@ export interface BuildArchiveInput {
  * Everything that one run leaves, as the files of a Frictionless Data Package: path to content. The chain is closed
  * with an `archived` event that holds the SHA-256 of rig, protocol, steps and channels, unless it already ends in one.
  */
-export function buildArchive(input: BuildArchiveInput, sha256: Sha256OfBytes): Map<string, Uint8Array> {
+export function buildArchive(input: BuildArchiveInput, sha256OfBytes: Sha256OfBytes): Map<string, Uint8Array> {
+  const sha256 = hashedOnce(sha256OfBytes);
   const recorded = recordedFiles(input);
   const events = closedChain(input, recorded, sha256);
   const files: FileEntry[] = [
@@ -55,10 +57,48 @@ export function buildArchive(input: BuildArchiveInput, sha256: Sha256OfBytes): M
   ];
   if (input.exclusions !== undefined)
     files.push(csvFile(exclusionsFile, exclusionsCsv(input.exclusions), { name: 'exclusions', schema: exclusionsSchema }));
+  files.push(...descriptions(input, files, sha256));
   const archive = new Map(files.map((file) => [file.path, file.bytes]));
   archive.set('datapackage.json', utf8(`${JSON.stringify(dataPackage(input, files, sha256), null, 2)}\n`));
   return archive;
 }
+
+/** The hash of a file stands in the chain, in the package and in the crate. */
+function hashedOnce(sha256: Sha256OfBytes): Sha256OfBytes {
+  const known = new Map<Uint8Array, string>();
+  return (content) => {
+    if (typeof content === 'string') return sha256(content);
+    const hash = known.get(content) ?? sha256(content);
+    known.set(content, hash);
+    return hash;
+  };
+}
+
+/** RO-Crate metadata and citation, which describe all the other files. */
+function descriptions(input: BuildArchiveInput, files: readonly FileEntry[], sha256: Sha256OfBytes): FileEntry[] {
+  const { run, createdAt, software } = input;
+  const described: DescribedRun = {
+    runId: run.runId,
+    title: titleOf(input),
+    operator: run.operator,
+    createdAt,
+    startedAt: iso(run.startedAtUtcMs),
+    endedAt: iso(run.endedAtUtcMs),
+    software,
+    licenses: licensesOf(input),
+  };
+  const citation: FileEntry = {
+    path: 'CITATION.cff',
+    bytes: utf8(citationText(described)),
+    facts: { name: 'citation', format: 'cff', mediatype: 'application/yaml', encoding: 'utf-8' },
+  };
+  const all = [...files, citation].map(({ path, bytes, facts }) => ({ path, bytes, mediatype: String(facts.mediatype) }));
+  return [citation, jsonFile('ro-crate-metadata.json', crateMetadata(described, all, sha256))];
+}
+
+const iso = (utcMs: number | null) => (utcMs === null ? null : new Date(utcMs).toISOString());
+const titleOf = ({ title, run, protocol }: BuildArchiveInput) => title ?? `Run ${run.runId}: ${protocol.name}`;
+const licensesOf = ({ licenses }: BuildArchiveInput) => licenses ?? [{ name: 'notspecified', title: 'No licence stated' }];
 
 /** The `data` of the event `archived` for a run's records, for a caller that stores the event itself. */
 export function archivedData(
@@ -132,7 +172,6 @@ function closedChain(input: BuildArchiveInput, recorded: readonly FileEntry[], s
 }
 
 function runJson(run: ArchiveRunFacts, events: readonly ChainedEvent[]): Record<string, unknown> {
-  const iso = (utcMs: number | null) => (utcMs === null ? null : new Date(utcMs).toISOString());
   return {
     runId: run.runId,
     outcome: run.outcome,
@@ -150,9 +189,9 @@ function dataPackage(input: BuildArchiveInput, files: readonly FileEntry[], sha2
   return {
     profile: 'data-package',
     name: `evenfall-run-${input.run.runId.toLowerCase().replaceAll(/[^a-z0-9._-]+/g, '-')}`,
-    title: input.title ?? `Run ${input.run.runId}: ${input.protocol.name}`,
+    title: titleOf(input),
     created: input.createdAt,
-    licenses: input.licenses ?? [{ name: 'notspecified', title: 'No licence stated' }],
+    licenses: licensesOf(input),
     resources: files.map((file) => ({ ...file.facts, path: file.path, bytes: file.bytes.length, hash: `sha256:${sha256(file.bytes)}` })),
     evenfall: {
       formatVersion: 1,
