@@ -4,6 +4,7 @@ import { channelsOfRig } from '../store/imports';
 import { sampleFlow, type SampleFlow } from '../store/runs-read';
 import type { Services } from './services';
 import { fail, note, pass, type Outcome, type StartPlan } from './start-check-parts';
+import { judgeWaitedChannels, waitedFor } from './waited-channels';
 
 /** Whether the deflection flows, and has for so long without a gap that a night may be trusted to it. */
 
@@ -55,6 +56,25 @@ export async function dataCheck(services: Services, plan: StartPlan, station: Ri
   const nowUtcMs = services.clock.utcMs();
   const flow = await sampleFlow(services.database, { labId: plan.rig.labId, channelId: source.id }, nowUtcMs - flowMs);
   return judgeFlow({ ...source, nowUtcMs, flow });
+}
+
+/** The channels that steps wait for; null where none does. */
+export async function waitedChannelsCheck(services: Services, plan: StartPlan, station: RigStation | null): Promise<Outcome | null> {
+  const wanted = waitedFor(plan.protocol);
+  if (wanted.length === 0) return null;
+  const [own, nowUtcMs] = [station?.channel ?? null, services.clock.utcMs()];
+  const { labId, id: rigId } = plan.rig;
+  const filled = (await channelsOfRig(services.database.db, labId, rigId)).filter(
+    ({ id, runId, source }) => runId === null && (source === 'stream' || id === own?.id),
+  );
+  const channels = await Promise.all(
+    filled.map(async ({ id, name, unit, role, rateHz }) => {
+      const { lastUtcMs } = await sampleFlow(services.database, { labId, channelId: id }, nowUtcMs - freshMs);
+      return { name, unit, role, rateHz, lastUtcMs };
+    }),
+  );
+  const deflection = (await sourceOf(services, plan, station))?.name ?? null;
+  return judgeWaitedChannels({ wanted, channels, deflection, document: plan.document, nowUtcMs });
 }
 
 type Source = Pick<FlowSeen, 'name' | 'rateHz' | 'device'> & { id: string };

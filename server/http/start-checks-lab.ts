@@ -7,7 +7,7 @@ import type { RigStation } from '../interfaces/rig-stations';
 import { ping } from '../store/health';
 import { signaturesOf } from '../store/locks';
 import { activeRuns, type RunListRow } from '../store/runs-read';
-import { dataCheck } from './data-check';
+import { dataCheck, waitedChannelsCheck } from './data-check';
 import type { Services } from './services';
 import { check, fail, note, pass, type Outcome, type StartPlan } from './start-check-parts';
 
@@ -27,8 +27,10 @@ interface Seen {
 
 export async function labChecks(services: Services, plan: StartPlan, seen: Seen): Promise<StartCheck[]> {
   const runs = await activeRuns(services.database.db, plan.rig.labId);
+  const waited = await waitedChannelsCheck(services, plan, seen.station);
   return [
     check('data', 'Deflection', await dataCheck(services, plan, seen.station)),
+    ...(waited === null ? [] : [check('waited-channels', 'Waited for', waited)]),
     check('database', 'Database', await databaseCheck(services)),
     check('disk', 'Free disk', await diskCheck(services, seen.timeline)),
     check('free', 'No other run', freeCheck(services, plan.rig.id, runs.get(plan.rig.id))),

@@ -1,4 +1,5 @@
 import { demoIds } from '@/db/demo/seed';
+import type { ProtocolDocument } from '@/shared/protocol/document';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer } from '@/tests/support/lab-server';
@@ -178,6 +179,24 @@ describe('start checks', () => {
     expect(value('database', 'answer')).toBeGreaterThanOrEqual(0);
     const { armed } = Object.fromEntries(told) as { armed: Told };
     expect(Number(figureOf(armed, 'armed for')) - Number(figureOf(armed, 'to spare'))).toBeCloseTo(report.durationS, 3);
+  });
+
+  test('look at the channels that steps wait for', async () => {
+    const calm = { kind: 'settle' as const, calmWhen: { amplitude_urad: 20, window_s: 420 } };
+    const wait = { kind: 'wait' as const, until: { channel: 'box temperature', below: 24 } };
+    const said = async (...steps: ProtocolDocument['steps']) => {
+      const protocolId = await lab.issue({ formatVersion: 1, name: 'Waits', steps: [{ kind: 'home' }, ...steps] });
+      const report = await checks(`protocolId=${protocolId}&revision=1`);
+      return report.checks.find(({ code }: Told) => code === 'waited-channels');
+    };
+    await lab.advance(2_000);
+    expect(await said(calm)).toMatchObject({ state: 'pass', detail: expect.stringContaining('deflection') });
+    expect(await said(calm, wait)).toMatchObject({
+      state: 'fail',
+      detail: expect.stringMatching(
+        /^3\.wait would wait in vain .*no device of this rig fills a channel "box temperature"\. There are: deflection\.$/,
+      ),
+    });
   });
 
   test('want room on the disk, and say how much is to be made', async () => {
