@@ -18,7 +18,8 @@ const judged = (steps: Step[], more: Partial<Waiting>) =>
     ...{ wanted: waitedFor(protocolOf(...steps)), channels: [channel('box temperature'), spot], deflection: 'spot', document: demoRigWide },
     ...{ nowUtcMs: now, ...more },
   });
-const { lever: _, ...leverless } = demoRigWide;
+const leverless = { ...demoRigWide };
+delete leverless.lever;
 const inMm = [channel('spot', { unit: 'mm', role: 'deflection' })];
 
 test('where no step waits for a channel there is nothing to check', () => {
