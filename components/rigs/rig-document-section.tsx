@@ -7,6 +7,7 @@ import { Button, fileNameOf, Section, saveTextFile } from '@/components/ui';
 import type { RigView } from '@/shared/contracts/rigs';
 import type { DocumentRow } from './document-rows';
 import { DocumentList } from './document-list';
+import { FibrePanel } from './fibre-panel';
 import { QuantitySheet } from './quantity-sheet';
 import { ReviseSheet } from './revise-sheet';
 import { RigImportSheet } from './rig-import-sheet';
@@ -59,6 +60,7 @@ export function RigDocumentSection({ rig, etag }: { rig: RigView; etag: string |
         changed={draft.changes.map((change) => change.path)}
         onPress={mayEdit ? (row) => setSheet({ kind: 'quantity', row }) : undefined}
       />
+      <FibrePanel document={draft.document} />
       {sheet?.kind === 'quantity' ? <QuantitySheet row={sheet.row} draft={draft} onClose={close} /> : null}
       {sheet?.kind === 'import' ? <RigImportSheet onDocument={draft.set} onClose={close} /> : null}
       {sheet?.kind === 'revise' ? <ReviseSheet rig={rig} etag={etag} draft={draft} onClose={close} /> : null}
