@@ -126,6 +126,11 @@ export class Draft {
 
   /** Makes `step` the present one and opens its row, whose sequence number is given here. */
   openStep(step: ActiveStep): void {
+    if (step.pause === true) {
+      step.row.seq = this.context.rowCount;
+      this.context.step = step;
+      return;
+    }
     this.context.rowCount += 1;
     step.row.seq = this.context.rowCount;
     this.context.step = step;
@@ -141,6 +146,7 @@ export class Draft {
     Object.assign(step.row, { endUtcMs: at.utcMs, uEndS: at.uS, angleEndDeg: angleDeg, outcome });
     if (step.row.kind === 'dwell') noteVerdict(this, step.row);
     step.broken = outcome === 'cut short';
+    if (step.pause === true) return;
     noteRowClosed(this, step.row, step.motion !== null);
     this.saveRow(step.row);
     this.log('step-ended', { seq: step.row.seq, path: step.row.path, outcome, angleDeg }, at);

@@ -1,14 +1,14 @@
 import type { Instant } from '../interfaces/clock';
 import { startRun } from './beginning';
 import type { Draft } from './draft';
-import type { InterruptionCause, KnownController, RunEvent } from './run-context';
+import type { ActiveStep, InterruptionCause, KnownController, RunEvent } from './run-context';
 import { finishMotion, reachedTarget, takeAhead, untoldEdge } from './motions';
 import { slipRefusal } from './position';
 import { predictEndUtcMs } from './predicted-end';
 import { awaits, beginAwaiting } from './awaiting';
 import { toleranceDeg } from './rows';
-import { beginHome, beginStanding, beginSwing, chooseNext, firstLeadMs, standingEndUtcMs } from './steps';
-import { CONFIRM_MS, GAP_LIMIT_MS } from './timing';
+import { beginHome, beginStanding, beginSwing, chooseAfter, chooseNext, firstLeadMs, standingEndUtcMs } from './steps';
+import { CONFIRM_MS, GAP_LIMIT_MS, LEAST_LEAD_MS } from './timing';
 
 /** How a run comes to rest and how it goes on: holds, stops, interruptions, resuming. */
 
@@ -75,7 +75,8 @@ export function requestHoldAfterDwell(draft: Draft): void {
   draft.log('hold-after-dwell-requested', { by });
   context.holdAfterStep = by;
   context.intervention = { kind: 'hold-after-dwell', by, serverAtUtcMs: draft.nowUtcMs, confirmedAtUtcMs: null, commandId: null };
-  if (context.ahead === null || context.ahead.cancelled || context.step === null) return;
+  // Between the moves of a shaped swing or a kick the step goes on.
+  if (context.ahead === null || context.ahead.cancelled || context.step === null || context.step.pause === true) return;
   context.intervention.commandId = draft.command((id) => ({ kind: 'hold', id }));
   context.ahead.cancelled = true;
   context.deadlineUtcMs = standingEndUtcMs(context.step);
@@ -248,9 +249,17 @@ function resumeStep(draft: Draft): void {
   if (step === null || !step.broken) return chooseNext(draft);
   if (step.row.kind === 'home') return beginHome(draft, step.item);
   if (awaits(step)) return beginAwaiting(draft, step.item);
+  if (step.pause === true) return resumePause(draft, step);
   // A dwell or settle lasts as long as first planned; a wait ends at its time of day, however long it was held.
   if (step.motion === null) return beginStanding(draft, step.item, step.row.kind === 'wait' ? null : step.plannedMs);
   beginSwing(draft, { item: step.item, late: true });
+}
+
+/** Between two moves: the next one in its time if that is still to come, else at once and late. */
+function resumePause(draft: Draft, step: ActiveStep): void {
+  const leftMs = standingEndUtcMs(step) - draft.nowUtcMs;
+  if (leftMs > LEAST_LEAD_MS) return beginStanding(draft, step.item, leftMs);
+  chooseAfter(draft, true);
 }
 
 /**

@@ -1,7 +1,7 @@
 import type { StepOutcome, StepRow } from '@/shared/archive/run-records';
 import { advanceCursor } from '@/shared/protocol/cursor';
 import type { Step } from '@/shared/protocol/document';
-import { swingMove } from '@/shared/protocol/durations';
+import { moveOf } from '@/shared/protocol/step-parts';
 import type { Instant } from '../interfaces/clock';
 import type { MotionSent } from '../interfaces/turntable-link';
 import type { Draft } from './draft';
@@ -30,7 +30,7 @@ export function takeAhead(draft: Draft): void {
     context.dwellJustNotGood = false;
     if (item === null) return;
     context.cursor = cursor;
-    if (item.step.kind === 'swing') {
+    if (item.part?.kind === 'move' || (item.part === undefined && item.step.kind === 'swing')) {
       openSwing(draft, { item, commandId: ahead.commandId, startUtcMs: ahead.startUtcMs, late: false });
       noteBegan(draft);
       return;
@@ -52,9 +52,17 @@ export function noteBegan(draft: Draft): void {
   if (context.onCadence && stamp.utcMs - step.row.plannedStartUtcMs > LATE_MS) motion.late = true;
   Object.assign(step.row, { startUtcMs: stamp.utcMs, uStartS: stamp.uS });
   if (seen && event.link.angleDeg !== null) step.row.angleStartDeg = event.link.angleDeg;
-  if (step.row.kind === 'swing') context.swingStartUtcMs = stamp.utcMs;
+  noteSwingStart(draft, stamp.utcMs);
   draft.saveRow(step.row);
   confirmResume(draft);
+}
+
+/** A beat counts from the first move of a swing; where a later one came late, as if the first had been late as well. */
+function noteSwingStart({ context, step, motion }: Draft, beganUtcMs: number): void {
+  if (step.row.kind === 'home') return;
+  const { part } = step.item;
+  const offsetMs = part?.kind === 'move' ? 1000 * part.offsetS : 0;
+  if (offsetMs === 0 || motion.late || context.swingStartUtcMs === null) context.swingStartUtcMs = beganUtcMs - offsetMs;
 }
 
 /**
@@ -72,7 +80,7 @@ export function untoldEdge(draft: Draft, edge: 'began' | 'ended', span: { fromUt
 function unseenBeginning(draft: Draft): Instant {
   const { step, motion, stamp, event } = draft;
   const fromUtcMs = motion.startUtcMs ?? step.row.startUtcMs;
-  const ended = event.type === 'link.motion-ended' && event.link.cause === 'done' && step.row.kind === 'swing';
+  const ended = event.type === 'link.motion-ended' && event.link.cause === 'done' && step.row.kind !== 'home';
   const toUtcMs = ended ? stamp.utcMs - motion.durationMs : draft.nowUtcMs;
   return untoldEdge(draft, 'began', { fromUtcMs, toUtcMs });
 }
@@ -108,12 +116,11 @@ export function dropAhead(draft: Draft): void {
 /** The controller could not take the motion just now: it is asked again, under a new id. */
 export function askAgain(draft: Draft): void {
   const { context, start, motion } = draft;
-  const planned = draft.step.item.step;
   context.moveRetries += 1;
   motion.commandId =
-    planned.kind === 'swing'
-      ? sendMove(draft, swingMove(planned, start.rig, context.moment.angleDeg), null)
-      : draft.command((id) => ({ kind: 'home', id }));
+    draft.step.row.kind === 'home'
+      ? draft.command((id) => ({ kind: 'home', id }))
+      : sendMove(draft, moveOf(draft.step.item, start.rig, context.moment.angleDeg), null);
 }
 
 function confirmResume(draft: Draft): void {

@@ -19,7 +19,7 @@ export function predictEndUtcMs(start: RunStart, context: RunContext, { nowUtcMs
     if (next === null || next.item === null) return state.utcMs;
     cursor = next.cursor;
     eachStep?.(next.item, state.utcMs);
-    state = stateAfterIfPossible(next.item.step, start, state);
+    state = stateAfterIfPossible(next.item, start, state);
   }
 }
 
@@ -41,14 +41,17 @@ function afterPresentStep(start: RunStart, { step, moment, swingStartUtcMs, wait
     return { utcMs, angleDeg: moment.angleDeg, swingStartUtcMs: null };
   }
   if (step?.broken === true && step.row.kind === 'wait')
-    return stateAfterIfPossible(step.item.step, start, { utcMs: nowUtcMs, angleDeg: moment.angleDeg, swingStartUtcMs: null });
+    return stateAfterIfPossible(step.item, start, { utcMs: nowUtcMs, angleDeg: moment.angleDeg, swingStartUtcMs: null });
   if (step === null) return { utcMs: Math.max(moment.utcMs, nowUtcMs), angleDeg: moment.angleDeg, swingStartUtcMs: null };
   const { row, motion, broken, plannedMs } = step;
+  if (step.pause === true)
+    return { utcMs: Math.max(nowUtcMs, row.plannedEndUtcMs ?? nowUtcMs), angleDeg: moment.angleDeg, swingStartUtcMs };
   const lengthMs = plannedMs ?? (row.plannedEndUtcMs ?? row.startUtcMs) - row.plannedStartUtcMs;
+  const offsetMs = step.item.part?.kind === 'move' ? 1000 * step.item.part.offsetS : 0;
   const endUtcMs = broken ? nowUtcMs + lengthMs : Math.max(row.startUtcMs + lengthMs, nowUtcMs);
   return {
     utcMs: endUtcMs,
     angleDeg: motion?.targetDeg ?? moment.angleDeg,
-    swingStartUtcMs: motion === null ? null : broken ? nowUtcMs : (swingStartUtcMs ?? row.startUtcMs),
+    swingStartUtcMs: motion === null ? null : broken ? nowUtcMs - offsetMs : (swingStartUtcMs ?? row.startUtcMs),
   };
 }

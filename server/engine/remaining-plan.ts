@@ -50,7 +50,7 @@ export interface SkipPlan extends RemainingPlan {
 export function skipPlan(start: RunStart, { state, context }: RunSnapshot, nowUtcMs: number): SkipPlan | null {
   const { step } = context;
   if ((state !== 'held' && state !== 'standing' && state !== 'awaiting') || step === null || step.motion !== null) return null;
-  if (step.row.outcome !== null && !step.broken) return null;
+  if (step.pause === true || (step.row.outcome !== null && !step.broken)) return null;
   const { seq, path, kind, label, station, plannedEndUtcMs } = step.row;
   const leftMs = step.broken ? (step.plannedMs ?? 0) : (plannedEndUtcMs ?? nowUtcMs) - nowUtcMs;
   const after = { ...context, step: null, moment: { ...context.moment, utcMs: nowUtcMs } };
@@ -80,7 +80,7 @@ function planFrom(start: RunStart, context: RunContext, begun: Begun): Remaining
       const { step } = item;
       next ??= nextOf(item, '');
       if (step.kind === 'dwell') dwells += 1;
-      if (step.kind === 'swing' || step.kind === 'home') firstMotion ??= step;
+      if (step.kind === 'swing' || step.kind === 'kick' || step.kind === 'home') firstMotion ??= step;
     },
   });
   return {

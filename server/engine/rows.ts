@@ -21,7 +21,7 @@ export function newRow(draft: Draft, { item, station, endUtcMs }: RowPlan): Step
   return {
     seq: 0,
     path: item.path,
-    kind: item.step.kind as StepRowKind,
+    kind: item.part?.kind === 'ring-down' ? 'ring-down' : (item.step.kind as StepRowKind),
     label: item.step.label ?? '',
     station,
     plannedStartUtcMs: moment.utcMs,

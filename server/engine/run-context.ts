@@ -18,7 +18,7 @@ import type { OpenPair } from './pairs';
  * Raised whenever the shape or meaning of the stored context changes; `stored-snapshot.ts` brings older ones up to it, and versions that
  * it does not know are quarantined.
  */
-export const CHART_VERSION = 6;
+export const CHART_VERSION = 7;
 
 export type ChartState =
   | 'starting'
@@ -69,6 +69,8 @@ export interface ActiveStep {
   broken: boolean;
   /** It ends by a condition or a person, not by a plan. */
   awaits?: boolean;
+  /** The sources stand between two moves of a shaped swing or a kick: such a pause has no row in the log; `row` only tells of it. */
+  pause?: boolean;
 }
 
 /** What a step that ends by a condition or a person waits for. */

@@ -11,6 +11,7 @@ export function skipRefusal(draft: Draft): string | null {
   const { step, ahead, holdAfterStep } = draft.context;
   if (step === null || (step.row.outcome !== null && !step.broken)) return 'No step is under way: resume goes on with the next one.';
   if (step.row.kind === 'prompt') return 'A prompt is not left out: arm the rig again and confirm it.';
+  if (step.pause === true) return 'The sources are between two moves of one step, which cannot be left out.';
   if (step.motion !== null) return 'A motion cannot be left out: the sources would not stand where the next step measures.';
   if (step.row.seq !== seq) return 'The step that was reviewed is over. Look at the run again.';
   if (holdAfterStep !== null) return `${holdAfterStep} asked to hold after this step. Withdraw that first, or hold now.`;

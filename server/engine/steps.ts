@@ -1,5 +1,5 @@
 import { advanceCursor, type CursorMoment, type PlannedItem } from '@/shared/protocol/cursor';
-import type { Step, SwingStep } from '@/shared/protocol/document';
+import type { Step } from '@/shared/protocol/document';
 import {
   dwellEndUtcMs,
   homeDurationS,
@@ -7,13 +7,13 @@ import {
   motionOf,
   settleEndUtcMs,
   type SwingMove,
-  swingMove,
   UnplayableStep,
   waitUntilLocalTime,
 } from '@/shared/protocol/durations';
 import { homingObstacle } from '@/shared/protocol/homing';
 import { pathObstacles } from '@/shared/protocol/motion-path';
 import { stationAt } from '@/shared/protocol/stations';
+import { moveOf, partsOf } from '@/shared/protocol/step-parts';
 import { waitOf } from '@/shared/protocol/wait';
 import type { RigMotion } from '@/shared/rig/document';
 import type { Instant } from '../interfaces/clock';
@@ -29,6 +29,11 @@ import { BEGIN_GRACE_MS, LEAD_MS, LEAST_LEAD_MS, LOOK_LEAD_MS, MOTION_GRACE_MS }
 
 /** Takes the next step of the protocol and begins it; marks are written in passing. */
 export function chooseNext(draft: Draft): void {
+  chooseAfter(draft, false);
+}
+
+/** As `chooseNext`; `late`: a move that comes now comes after its time. */
+export function chooseAfter(draft: Draft, late: boolean): void {
   const { context } = draft;
   context.step = null;
   context.ahead = null;
@@ -45,7 +50,7 @@ export function chooseNext(draft: Draft): void {
       context.next = 'finished';
       return;
     }
-    if (holdIsDue(draft)) {
+    if (!isWithin(item) && holdIsDue(draft)) {
       context.next = 'holding';
       return;
     }
@@ -59,9 +64,12 @@ export function chooseNext(draft: Draft): void {
         context.next = halt;
         return;
       }
-    } else return beginItem(draft, item);
+    } else return beginItem(draft, { item, late });
   }
 }
+
+/** A step that was begun goes on to its end before a hold between steps counts. */
+const isWithin = ({ part }: PlannedItem): boolean => part !== undefined && !(part.kind === 'move' && part.offsetS === 0);
 
 /** The step after the cursor; null with the reason set where a protocol goes on for ever. */
 function nextItem(
@@ -110,9 +118,9 @@ export function writeMark(draft: Draft, item: PlannedItem): void {
 }
 
 /** Begins a step at the present moment; one that this rig cannot carry out fails the run with a sentence. */
-function beginItem(draft: Draft, item: PlannedItem): void {
+function beginItem(draft: Draft, { item, late }: SwingStart): void {
   try {
-    beginKind(draft, item);
+    beginKind(draft, { item, late });
   } catch (error) {
     if (!(error instanceof UnplayableStep)) throw error;
     draft.because(error.code, `Step ${item.path}: ${error.message}`);
@@ -120,8 +128,12 @@ function beginItem(draft: Draft, item: PlannedItem): void {
   }
 }
 
-function beginKind(draft: Draft, item: PlannedItem): void {
-  switch (item.step.kind) {
+function beginKind(draft: Draft, { item, late }: SwingStart): void {
+  const { step, part } = item;
+  if (part !== undefined) return part.kind === 'move' ? beginSwing(draft, { item, late }) : beginStanding(draft, item);
+  // Parts that could not be worked out: why is said here.
+  partsOf(step, draft.start.rig, draft.context.moment.angleDeg);
+  switch (step.kind) {
     case 'home':
       return beginHome(draft, item);
     case 'swing':
@@ -187,7 +199,7 @@ export function beginSwing(draft: Draft, { item, late }: SwingStart): void {
     context.next = 'failed';
     return;
   }
-  const move = swingMove(item.step as SwingStep, draft.start.rig, context.moment.angleDeg);
+  const move = moveOf(item, draft.start.rig, context.moment.angleDeg);
   const obstacle = obstacleOn(draft, move.targetDeg);
   if (obstacle !== null) {
     draft.because('path-blocked', `Step ${item.path}: the move is refused because ${obstacle}.`);
@@ -219,7 +231,7 @@ interface SwingOpening extends SwingStart {
 
 export function openSwing(draft: Draft, { item, commandId, startUtcMs, late }: SwingOpening): void {
   const { context } = draft;
-  const move = swingMove(item.step as SwingStep, draft.start.rig, context.moment.angleDeg);
+  const move = moveOf(item, draft.start.rig, context.moment.angleDeg);
   const durationMs = 1000 * move.durationS;
   const row = newRow(draft, { item, station: move.station, endUtcMs: context.moment.utcMs + durationMs });
   const motion: Motion = { commandId, targetDeg: move.targetDeg, startUtcMs, durationMs, late, began: false, reached: false };
@@ -230,9 +242,10 @@ export function openSwing(draft: Draft, { item, commandId, startUtcMs, late }: S
 export function beginStanding(draft: Draft, item: PlannedItem, plannedMs: number | null = null): void {
   const { context, start } = draft;
   const { moment } = context;
-  const end = plannedMs === null ? standingEnd(draft, item.step) : { endUtcMs: moment.utcMs + plannedMs, holds: false };
+  const end = plannedMs === null ? standingEnd(draft, item) : { endUtcMs: moment.utcMs + plannedMs, holds: false };
   const row = newRow(draft, { item, station: stationOf(draft), endUtcMs: end.endUtcMs });
-  draft.openStep({ item, row, plannedMs: end.endUtcMs - moment.utcMs, motion: null, broken: false });
+  const pause = item.part?.kind === 'pause' ? { pause: true } : {};
+  draft.openStep({ item, row, plannedMs: end.endUtcMs - moment.utcMs, motion: null, broken: false, ...pause });
   context.deadlineUtcMs = Math.max(moment.utcMs, end.endUtcMs - firstLeadMs(item.step.kind));
   context.next = 'standing';
   if (!end.holds) return;
@@ -260,9 +273,14 @@ function describeTime(step: Step): string {
   return step.kind === 'wait' && 'localTime' in step.until ? step.until.localTime : 'the time';
 }
 
-function standingEnd(draft: Draft, step: Step): { endUtcMs: number; holds: boolean } {
+function standingEnd(draft: Draft, { step, part }: PlannedItem): { endUtcMs: number; holds: boolean } {
   const { moment, swingStartUtcMs } = draft.context;
   const { rig, timeZone } = draft.start;
+  if (part?.kind === 'ring-down') return { endUtcMs: moment.utcMs + 1000 * part.lengthS, holds: false };
+  if (part?.kind === 'pause') {
+    const plannedUtcMs = swingStartUtcMs === null ? moment.utcMs + 1000 * part.lengthS : swingStartUtcMs + 1000 * part.offsetS;
+    return { endUtcMs: Math.max(moment.utcMs, plannedUtcMs), holds: false };
+  }
   if (step.kind === 'dwell') return { endUtcMs: dwellEndUtcMs(step, rig, { startUtcMs: moment.utcMs, swingStartUtcMs }), holds: false };
   if (step.kind === 'settle') return { endUtcMs: settleEndUtcMs(step, moment.utcMs), holds: false };
   if (step.kind === 'wait' && 'localTime' in step.until) {
@@ -284,7 +302,7 @@ export function endStanding(draft: Draft): void {
   const at: Instant = { utcMs: standingEndUtcMs(step), uS: uPlanS };
   draft.closeRow({ at, angleDeg: step.row.angleStartDeg, outcome: 'done' });
   draft.standAt(at, moment.angleDeg);
-  Object.assign(draft.context, { onCadence: true, swingStartUtcMs: null, swungFromDeg: null });
+  Object.assign(draft.context, { onCadence: true, swungFromDeg: null, ...(step.pause === true ? {} : { swingStartUtcMs: null }) });
 }
 
 /**
@@ -298,27 +316,39 @@ export function sendAhead(draft: Draft): void {
   const endUtcMs = standingEndUtcMs(step);
   context.deadlineUtcMs = endUtcMs;
   if (endUtcMs - draft.nowUtcMs < LEAST_LEAD_MS || context.moveRetries > 0) return;
-  if (context.holdAfterStep !== null || holdOfDwells(draft) !== null || armHasEnded(draft, endUtcMs) || !draft.controller.positionKnown)
-    return;
-  const swing = peekSwing(draft, endUtcMs);
-  if (swing === null) return;
-  const move = swingMove(swing, draft.start.rig, context.moment.angleDeg);
+  const holds = context.holdAfterStep !== null || holdOfDwells(draft) !== null || armHasEnded(draft, endUtcMs);
+  if ((holds && step.pause !== true) || !draft.controller.positionKnown) return;
+  const next = peekMove(draft, endUtcMs);
+  if (next === null) return;
+  const move = moveOf(next, draft.start.rig, context.moment.angleDeg);
   if (obstacleOn(draft, move.targetDeg) !== null) return;
   const commandId = sendMove(draft, move, endUtcMs);
   context.ahead = { commandId, targetDeg: move.targetDeg, startUtcMs: endUtcMs, cancelled: false };
   context.deadlineUtcMs = endUtcMs + BEGIN_GRACE_MS;
 }
 
-/** The swing that follows at `utcMs`, looking through marks, or null where something else follows. */
-function peekSwing(draft: Draft, utcMs: number): SwingStep | null {
+/** The move that follows at `utcMs`, looking through marks, or null where something else follows. */
+function peekMove(draft: Draft, utcMs: number): PlannedItem | null {
   let { cursor } = draft.context;
   let moment: CursorMoment = cursorMoment(draft, utcMs);
   for (;;) {
     const next = nextItem(draft, { cursor, moment });
     moment = { ...moment, notGood: false };
     if (next?.item == null) return null;
-    if (next.item.step.kind === 'swing') return next.item.step;
+    if (isMove(next.item, draft)) return next.item;
     if (next.item.step.kind !== 'mark') return null;
     cursor = next.cursor;
+  }
+}
+
+/** A swing, or the first move of one that is made of parts; not where these could not be worked out. */
+function isMove({ step, part }: PlannedItem, draft: Draft): boolean {
+  if (part !== undefined) return part.kind === 'move';
+  if (step.kind !== 'swing') return false;
+  try {
+    return partsOf(step, draft.start.rig, draft.context.moment.angleDeg) === null;
+  } catch (error) {
+    if (error instanceof UnplayableStep) return false;
+    throw error;
   }
 }

@@ -20,6 +20,7 @@ export const isOwn = (effect: Effect): effect is OwnEffect => effect.kind !== 'l
  * Contexts of version 1 tell nothing of passes of the home edge: the count is unproved until the next one. Those of version 2 were never
  * written while the database was away. Those of version 3 do not tell which dwells make a pair: the next one begins one. Before version 5 no
  * dwell was judged and nothing was waited for. Before version 6 it was not looked whether the pendulum answers a swing, and silence held no run.
+ * Before version 7 there were neither shaped swings nor kicks: no step is made of parts.
  */
 type Newer =
   | 'swungFromDeg'

@@ -36,12 +36,12 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
   };
 }
 
-const moves = (item: TimelineItem) => item.kind === 'home' || item.kind === 'swing';
+const moves = (item: TimelineItem) => item.kind === 'home' || item.kind === 'swing' || item.kind === 'kick';
 
 function firstMoveOf(timeline: Timeline): string {
   const first = timeline.items.find(moves);
   if (first === undefined) return 'nothing moves';
   if (first.kind === 'home') return 'home: find the edge of the home flag';
   const to = first.station === '' ? formatDegrees(first.angleToDeg) : `${first.station} (${formatDegrees(first.angleToDeg)})`;
-  return `swing from ${formatDegrees(first.angleFromDeg)} to ${to}`;
+  return `${first.kind} from ${formatDegrees(first.angleFromDeg)} to ${to}`;
 }

@@ -91,7 +91,9 @@ function beatsOf(items: readonly TimelineItem[]): Beat[] {
   let begin: TimelineItem | null = null;
   let longest: TimelineItem | null = null;
   for (const item of items) {
-    if (item.kind === 'swing' && item.angleFromDeg !== item.angleToDeg && item.documentPath !== 'atEnd.swing') {
+    // A shaped swing leaves nothing that the next could add to.
+    if (item.part !== undefined) begin = null;
+    else if (item.kind === 'swing' && item.angleFromDeg !== item.angleToDeg && item.documentPath !== 'atEnd.swing') {
       if (begin !== null && longest !== null) beats.push({ beatS: (item.startUtcMs - begin.startUtcMs) / 1000, longest });
       begin = item;
       longest = null;

@@ -1,10 +1,11 @@
 import type { RigDocument, RigMotion } from '../rig/document';
 import type { DwellStep, KickStep, ProtocolDocument, Step, SwingStep, SwingTarget } from './document';
-import { swingMove } from './durations';
+import { swingMove, UnplayableStep } from './durations';
 import type { Finding } from './finding';
 import { homingObstacle } from './homing';
 import { degrees, pathObstacles } from './motion-path';
-import { resolveTarget } from './stations';
+import { resolveTarget, sideAt } from './stations';
+import { partsDurationS, partsOf, type StepPart } from './step-parts';
 
 /** Where a protocol begins, as far as that is known. */
 export interface CheckStart {
@@ -114,7 +115,7 @@ function afterStep(step: Exclude<Step, { kind: 'repeat' }>, before: Situation, a
     case 'swing':
       return checkSwing(step, before, at);
     case 'kick':
-      checkKick(step, at);
+      checkKick(step, before, at);
       break;
     case 'dwell':
       checkDwell(step, before, at);
@@ -154,8 +155,34 @@ function knownStation(to: SwingTarget, { walk, path }: At): boolean {
   return false;
 }
 
-function checkKick(step: KickStep, at: At): void {
-  if (step.to !== undefined) knownStation(step.to, at);
+function checkKick(step: KickStep, { angleDeg }: Situation, at: At): void {
+  const { rig, isLost } = at.walk;
+  if (step.to !== undefined && !knownStation(step.to, at)) return;
+  if (rig.motion === undefined) return;
+  if (angleDeg === null) {
+    if (isLost) refuse(at, 'home-first', 'The sources would move before their position is known. Put a home step before the first motion.');
+    return;
+  }
+  const target = resolveTarget(rig, step.to ?? (sideAt(rig, angleDeg) === 'near' ? 'far' : 'near'));
+  const obstacles = target === null ? [] : pathObstacles(rig.motion, angleDeg, target.targetDeg);
+  for (const { code, reason } of obstacles)
+    refuse(
+      at,
+      code,
+      `The kick from ${degrees(angleDeg)} towards ${degrees(target?.targetDeg ?? 0)} is not allowed: ${reason}. ${allowance(rig.motion)}`,
+    );
+  if (obstacles.length === 0) checkedParts(step, angleDeg, at);
+}
+
+/** The parts of a shaped swing or a kick; null where there are none, with the refusal where there should be. */
+function checkedParts(step: KickStep | SwingStep, angleDeg: number, at: At): StepPart[] | null {
+  try {
+    return partsOf(step, at.walk.rig, angleDeg);
+  } catch (error) {
+    if (!(error instanceof UnplayableStep)) throw error;
+    refuse(at, error.code, error.message);
+    return null;
+  }
 }
 
 function checkSwing(step: SwingStep, before: Situation, at: At): Situation {
@@ -175,7 +202,9 @@ function checkSwing(step: SwingStep, before: Situation, at: At): Situation {
         : `The move from ${degrees(fromDeg)} to ${degrees(target.targetDeg)}`;
     refuse(at, code, `${move} is not allowed: ${reason}. ${allowance(rig.motion)}`);
   }
-  return { angleDeg: target.targetDeg, swingS: swingMove(step, rig, fromDeg).durationS };
+  const isFree = pathObstacles(rig.motion, fromDeg, target.targetDeg).length === 0;
+  const parts = before.angleDeg === null || !isFree ? null : checkedParts(step, fromDeg, at);
+  return { angleDeg: target.targetDeg, swingS: parts === null ? swingMove(step, rig, fromDeg).durationS : partsDurationS(parts) };
 }
 
 function allowance(motion: RigMotion): string {

@@ -1,6 +1,7 @@
 import type { RepeatStep, Step } from './document';
 import { nextOccurrenceUtcMs } from './durations';
 import { type LeafStep, type CursorPlan, stateAfterIfPossible } from './step-effect';
+import { partsIfPossible, type StepPart } from './step-parts';
 
 export type { LeafStep, CursorPlan } from './step-effect';
 
@@ -28,6 +29,8 @@ export interface CursorState {
   executed: number;
   /** The swing to the station of `atEnd` has been given out. */
   atEndGiven: boolean;
+  /** What of a shaped swing or a kick is still to come, as worked out when it began. */
+  parts?: PlannedItem[];
 }
 
 export interface PlannedItem {
@@ -36,6 +39,8 @@ export interface PlannedItem {
   /** As in the document: `2.repeat.1.swing`. */
   documentPath: string;
   step: LeafStep;
+  /** What of a step that is made of parts this is. */
+  part?: StepPart;
 }
 
 export interface CursorMoment {
@@ -64,6 +69,8 @@ export function advanceCursor(
   cursor: CursorState,
   moment: CursorMoment,
 ): { item: PlannedItem | null; cursor: CursorState } {
+  const [part, ...others] = cursor.parts ?? [];
+  if (part !== undefined) return { item: part, cursor: { ...cursor, parts: others } };
   const frames = cursor.frames.map((frame) => (moment.notGood === true ? { ...frame, spoilt: true } : { ...frame }));
   for (let decisions = 0; decisions <= greatestStepCount; decisions += 1) {
     const lists = listsOf(plan.protocol.steps, frames);
@@ -87,10 +94,19 @@ export function advanceCursor(
       const item = itemOf(lists, frames, step);
       frame.next += 1;
       if (cursor.executed >= greatestStepCount) throw new RangeError(`a protocol executes at most ${greatestStepCount} steps`);
-      return { item, cursor: { ...cursor, frames, executed: cursor.executed + 1 } };
+      return withParts(plan, moment, { item, cursor: { ...cursor, frames, executed: cursor.executed + 1 } });
     }
   }
   throw new RangeError('a repeat goes round without a step');
+}
+
+/** The first part of a step that is made of several; the others come next. */
+function withParts(plan: CursorPlan, { angleDeg }: CursorMoment, { item, cursor }: { item: PlannedItem; cursor: CursorState }) {
+  const parts = partsIfPossible(item.step, plan.rig, angleDeg)?.map((part): PlannedItem => {
+    return { ...item, path: part.kind === 'move' ? `${item.path}.${part.name}` : item.path, part };
+  });
+  const [first, ...others] = parts ?? [];
+  return first === undefined ? { item, cursor } : { item: first, cursor: { ...cursor, parts: others } };
 }
 
 /** The lists of steps that the frames work through, outermost first. */
@@ -157,7 +173,7 @@ function passEndsBy(repeat: RepeatStep, deadlineUtcMs: number, { plan, moment }:
     const next = advanceCursor(passPlan, cursor, state);
     if (next.item === null) return true;
     cursor = next.cursor;
-    state = stateAfterIfPossible(next.item.step, plan, state);
+    state = stateAfterIfPossible(next.item, plan, state);
   }
   return false;
 }

@@ -8,7 +8,15 @@ export { nextOccurrenceUtcMs, waitUntilLocalTime } from './local-time';
 /** A protocol that cannot be carried out on this rig; `check` finds all of these beforehand. */
 export class UnplayableStep extends Error {
   constructor(
-    readonly code: 'unknown-station' | 'motion-missing' | 'period-missing' | 'beat-needs-swing' | 'not-yet',
+    readonly code:
+      | 'unknown-station'
+      | 'motion-missing'
+      | 'period-missing'
+      | 'beat-needs-swing'
+      | 'shaped-impossible'
+      | 'kick-too-large'
+      | 'kick-impossible'
+      | 'not-yet',
     message: string,
   ) {
     super(message);

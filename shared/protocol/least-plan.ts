@@ -2,6 +2,7 @@ import type { RigDocument } from '../rig/document';
 import type { RepeatStep, Step } from './document';
 import { leastPasses } from './cursor';
 import { homeDurationS, swingMove, UnplayableStep } from './durations';
+import { partsDurationS, partsIfPossible } from './step-parts';
 import { waitOf } from './wait';
 
 export interface LeastPlan {
@@ -40,6 +41,8 @@ function afterStep(step: Step, rig: RigDocument, { angleDeg, swingS }: Before): 
         : { durationS: homeDurationS(rig, angleDeg ?? rig.motion.homeDeg), angleDeg: rig.motion.homeDeg };
     case 'swing':
       return afterSwing(step, rig, angleDeg);
+    case 'kick':
+      return { durationS: partsDurationS((angleDeg === null ? null : partsIfPossible(step, rig, angleDeg)) ?? []), angleDeg };
     case 'dwell':
       if (step.beat_periods !== undefined) return { durationS: Math.max(0, step.beat_periods * periodS - swingS), angleDeg };
       return { durationS: step.for_s ?? (step.periods ?? 0) * periodS, angleDeg };
@@ -57,7 +60,9 @@ function afterStep(step: Step, rig: RigDocument, { angleDeg, swingS }: Before): 
 function afterSwing(step: Extract<Step, { kind: 'swing' }>, rig: RigDocument, angleDeg: number | null): LeastPlan {
   try {
     const { durationS, targetDeg } = swingMove(step, rig, angleDeg ?? 0);
-    return { durationS: angleDeg === null ? 0 : durationS, angleDeg: targetDeg };
+    if (angleDeg === null) return { durationS: 0, angleDeg: targetDeg };
+    const parts = partsIfPossible(step, rig, angleDeg);
+    return { durationS: parts === null ? durationS : partsDurationS(parts), angleDeg: targetDeg };
   } catch (error) {
     if (error instanceof UnplayableStep) return { durationS: 0, angleDeg: null };
     throw error;

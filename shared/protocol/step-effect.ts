@@ -1,7 +1,8 @@
 import type { RigDocument } from '../rig/document';
 import type { ProtocolDocument, RepeatStep, Step } from './document';
-import { dwellEndUtcMs, homeDurationS, settleEndUtcMs, swingMove, UnplayableStep, waitUntilLocalTime } from './durations';
+import { dwellEndUtcMs, homeDurationS, settleEndUtcMs, UnplayableStep, waitUntilLocalTime } from './durations';
 import { stationAt } from './stations';
+import { moveOf, type StepPart } from './step-parts';
 import { waitOf } from './wait';
 
 export type LeafStep = Exclude<Step, RepeatStep>;
@@ -27,13 +28,31 @@ export interface PlanState {
   swingStartUtcMs: number | null;
 }
 
+/** A step of the plan, or a part of one. */
+export interface StepItem {
+  step: LeafStep;
+  part?: StepPart;
+}
+
+/** A beat counts from the first move of a swing in several. */
+function afterPart(part: StepPart, { utcMs, angleDeg, swingStartUtcMs }: PlanState): PlanState {
+  if (part.kind === 'move') {
+    const beganUtcMs = part.offsetS === 0 ? utcMs : swingStartUtcMs;
+    return { utcMs: utcMs + part.durationS * 1000, angleDeg: part.targetDeg, swingStartUtcMs: beganUtcMs };
+  }
+  const endUtcMs = part.kind === 'pause' && swingStartUtcMs !== null ? swingStartUtcMs + 1000 * part.offsetS : utcMs + 1000 * part.lengthS;
+  return { utcMs: Math.max(utcMs, endUtcMs), angleDeg, swingStartUtcMs: part.kind === 'pause' ? swingStartUtcMs : null };
+}
+
 /**
  * The state after a step if all goes by plan. A mark and a proof take no time; what a person ends and
  * the kinds that are not built yet count as none, a wait for a condition as long as the samples it needs, or as the step's limit where the most is asked for.
  * @throws UnplayableStep where the step cannot be carried out on the rig.
  */
-function stateAfter(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone' | 'conditions'>, state: PlanState): PlanState {
+function stateAfter(item: StepItem, plan: Pick<CursorPlan, 'rig' | 'timeZone' | 'conditions'>, state: PlanState): PlanState {
   const { rig, timeZone } = plan;
+  const { step, part } = item;
+  if (part !== undefined) return afterPart(part, state);
   const at = (utcMs: number, angleDeg = state.angleDeg): PlanState => ({ utcMs, angleDeg, swingStartUtcMs: null });
   const waited = (of: LeafStep) => {
     const wait = waitOf(of);
@@ -43,7 +62,7 @@ function stateAfter(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone' | 
     case 'home':
       return at(state.utcMs + homeDurationS(rig, state.angleDeg) * 1000, rig.motion?.homeDeg);
     case 'swing': {
-      const move = swingMove(step, rig, state.angleDeg);
+      const move = moveOf(item, rig, state.angleDeg);
       return { utcMs: state.utcMs + move.durationS * 1000, angleDeg: move.targetDeg, swingStartUtcMs: state.utcMs };
     }
     case 'dwell':
@@ -68,13 +87,14 @@ function stateAfter(step: LeafStep, plan: Pick<CursorPlan, 'rig' | 'timeZone' | 
  * counts from its own start, which is the longest it can be.
  */
 export function stateAfterIfPossible(
-  step: LeafStep,
+  item: StepItem,
   plan: Pick<CursorPlan, 'rig' | 'timeZone' | 'conditions'>,
   state: PlanState,
 ): PlanState {
+  const { step } = item;
   const beatAlone = step.kind === 'dwell' && step.beat_periods !== undefined && state.swingStartUtcMs === null;
   try {
-    return stateAfter(step, plan, beatAlone ? { ...state, swingStartUtcMs: state.utcMs } : state);
+    return stateAfter(item, plan, beatAlone ? { ...state, swingStartUtcMs: state.utcMs } : state);
   } catch (error) {
     if (error instanceof UnplayableStep) return { ...state, swingStartUtcMs: null };
     throw error;
@@ -83,10 +103,11 @@ export function stateAfterIfPossible(
 
 /** Station at which the sources stand in a state: the target's own name after a swing to it, else the first one at that angle. */
 export function stationAfter(
-  step: LeafStep,
+  { step, part }: StepItem,
   rig: RigDocument,
   after: { angleDeg: number; stationBefore: string; angleBeforeDeg: number },
 ): string {
-  if (step.kind === 'swing' && typeof step.to === 'string') return step.to;
+  if (part?.kind === 'move') return part.station;
+  if (part === undefined && step.kind === 'swing' && typeof step.to === 'string') return step.to;
   return after.angleDeg === after.angleBeforeDeg ? after.stationBefore : stationAt(rig, after.angleDeg);
 }

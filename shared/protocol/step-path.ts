@@ -16,10 +16,11 @@ export function formatStepPath(document: Pick<ProtocolDocument, 'steps'>, path: 
   return parts.length === 0 ? null : parts.join('.');
 }
 
-/** The positions in a document path or in the path of a run (`2.repeat[3].1.swing`); null for anything else, such as `atEnd`. */
+/** The positions in a document path or in the path of a run (`2.repeat[3].1.swing`, `.a` for a move of it); null for anything else, such as `atEnd`. */
 export function parseStepPath(path: string): StepPath | null {
-  if (!/^[1-9]\d*\.\w+(\[\d+\])?(\.[1-9]\d*\.\w+(\[\d+\])?)*$/.test(path)) return null;
+  if (!/^[1-9]\d*\.\w+(\[\d+\])?(\.[1-9]\d*\.\w+(\[\d+\])?)*(\.[a-z]{1,2})?$/.test(path)) return null;
   return path
+    .replace(/\.[a-z]{1,2}$/, '')
     .split('.')
     .filter((_, index) => index % 2 === 0)
     .map(Number);

@@ -1,4 +1,4 @@
-import type { ProtocolDocument, RepeatStep, Step, SwingStep } from './document';
+import type { ProtocolDocument, RepeatStep, Step } from './document';
 import type { Finding } from './finding';
 import { walkSteps } from './step-path';
 
@@ -7,7 +7,7 @@ import { walkSteps } from './step-path';
  * written for a later version is never run by half.
  */
 
-const builtKinds = new Set<Step['kind']>(['home', 'swing', 'dwell', 'settle', 'wait', 'proof', 'mark', 'prompt', 'repeat']);
+const builtKinds = new Set<Step['kind']>(['home', 'swing', 'dwell', 'kick', 'settle', 'wait', 'proof', 'mark', 'prompt', 'repeat']);
 
 /** Is the step kind carried out by this version? */
 export function isBuilt(kind: Step['kind']): boolean {
@@ -32,8 +32,6 @@ function documentNotYet({ evaluation }: ProtocolDocument): Finding[] {
 
 function stepNotYet(step: Step): string[] {
   switch (step.kind) {
-    case 'swing':
-      return swingNotYet(step);
     case 'mark':
       return step.frame === true ? ['Camera frames are not built yet. Set frame to false or leave it out.'] : [];
     case 'repeat':
@@ -41,10 +39,6 @@ function stepNotYet(step: Step): string[] {
     default:
       return isBuilt(step.kind) ? [] : [`The step kind "${step.kind}" is not built yet. Built are: ${[...builtKinds].join(', ')}.`];
   }
-}
-
-function swingNotYet({ profile }: SwingStep): string[] {
-  return profile === 'shaped' ? ['The swing profile "shaped" is not built yet. Use "plain".'] : [];
 }
 
 function repeatNotYet({ order }: RepeatStep): string[] {

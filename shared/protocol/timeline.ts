@@ -7,7 +7,9 @@ import { type PlanState, stateAfterIfPossible, stationAfter } from './step-effec
 export interface TimelineItem {
   path: string;
   documentPath: string;
-  kind: Exclude<StepKind, 'repeat'>;
+  kind: Exclude<StepKind, 'repeat'> | 'ring-down';
+  /** Of a shaped swing or a kick: which part this is. */
+  part?: 'move' | 'pause' | 'ring-down';
   label: string;
   /** Station at which the sources stand when the step ends; empty at an angle that is no station. */
   station: string;
@@ -15,7 +17,7 @@ export interface TimelineItem {
   endUtcMs: number;
   angleFromDeg: number;
   angleToDeg: number;
-  /** For swings: deg/s and deg/s2 of the move. */
+  /** For swings and the moves of a kick: deg/s and deg/s2. */
   speedDegS?: number;
   accelerationDegS2?: number;
 }
@@ -45,8 +47,8 @@ export function planTimeline(plan: CursorPlan, start: { utcMs: number; angleDeg:
     if (next === 'endless') return finish(items, start.utcMs, true);
     if (next.item === null) return finish(items, start.utcMs, false);
     cursor = next.cursor;
-    const after = stateAfterIfPossible(next.item.step, plan, state);
-    station = stationAfter(next.item.step, plan.rig, { angleDeg: after.angleDeg, angleBeforeDeg: state.angleDeg, stationBefore: station });
+    const after = stateAfterIfPossible(next.item, plan, state);
+    station = stationAfter(next.item, plan.rig, { angleDeg: after.angleDeg, angleBeforeDeg: state.angleDeg, stationBefore: station });
     items.push(timelineItem(next.item, plan.rig, { before: state, after, station }));
     state = after;
     if (items.length > greatestStepCount) return finish(items, start.utcMs, true);
@@ -67,14 +69,15 @@ function tryAdvance(
 }
 
 function timelineItem(
-  { path, documentPath, step }: PlannedItem,
+  { path, documentPath, step, part }: PlannedItem,
   rig: RigDocument,
   at: { before: PlanState; after: PlanState; station: string },
 ): TimelineItem {
   const item: TimelineItem = {
     path,
     documentPath,
-    kind: step.kind,
+    kind: part?.kind === 'ring-down' ? 'ring-down' : step.kind,
+    ...(part === undefined ? {} : { part: part.kind }),
     label: step.label ?? '',
     station: at.station,
     startUtcMs: at.before.utcMs,
@@ -82,7 +85,8 @@ function timelineItem(
     angleFromDeg: at.before.angleDeg,
     angleToDeg: at.after.angleDeg,
   };
-  if (step.kind !== 'swing' || rig.motion === undefined) return item;
+  if (part?.kind === 'move') return { ...item, speedDegS: part.speedDegS, accelerationDegS2: part.accelerationDegS2 };
+  if (part !== undefined || step.kind !== 'swing' || rig.motion === undefined) return item;
   return {
     ...item,
     speedDegS: step.speed_deg_s ?? rig.motion.maxSpeed_deg_s,

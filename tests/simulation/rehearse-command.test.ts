@@ -198,7 +198,7 @@ describe('unusable input ends with 2, a sentence, and no folder', () => {
     ],
     [
       'a step that is not built',
-      [file('kick.json', { formatVersion: 1, name: 'x', steps: [{ kind: 'home' }, { kind: 'kick', amplitude_urad: 2000 }] })],
+      [file('rotate.json', { formatVersion: 1, name: 'x', steps: [{ kind: 'home' }, { kind: 'rotate', period_s: 1800, turns: 2 }] })],
       'not-yet',
     ],
     ['a rig without motion', [short(), '--rig', file('motionless.json', { ...demoRigWide, motion: undefined })], 'motion'],

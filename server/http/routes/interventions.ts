@@ -118,6 +118,7 @@ const remainingOf = ({ dwellsLeft, finishUtcMs, next, firstMotion, relativeU }: 
 });
 
 function moveWords(step: LeafStep, { stations }: RigDocument): string {
+  if (step.kind === 'kick') return 'kick: there and back again';
   if (step.kind !== 'swing') return 'home: find the edge of the home flag';
   if (typeof step.to !== 'string') return `swing to ${formatDegrees(step.to.angle_deg)}`;
   const station = stations[step.to];

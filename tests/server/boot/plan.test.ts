@@ -143,8 +143,8 @@ describe('unusable input ends with 2, nothing on stdout and the reason on stderr
     ],
     [
       'a step that is not built yet',
-      () => [file('g.json', protocol([{ kind: 'home' }, { kind: 'kick', amplitude_urad: 2000 }]))],
-      '2.kick: The step kind "kick" is not built yet',
+      () => [file('g.json', protocol([{ kind: 'home' }, { kind: 'rotate', period_s: 1800, turns: 2 }]))],
+      '2.rotate: The step kind "rotate" is not built yet',
     ],
     [
       'a rig that does not fit its format',

@@ -106,9 +106,9 @@ const refusedStarts: { when: string; more: Partial<RunStart>; code: string; word
   },
   {
     when: 'with a step that is not built',
-    more: { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'kick', amplitude_urad: 2000 }] } },
+    more: { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'rotate', period_s: 1800, turns: 2 }] } },
     code: 'not-yet',
-    words: 'kick',
+    words: 'rotate',
   },
   { when: 'on a rig without a link', more: { rigId: 'west-bench' }, code: 'not-ready', words: 'no link' },
 ];

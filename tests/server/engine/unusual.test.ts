@@ -19,7 +19,11 @@ async function expectFailed(bench: Bench, words: string): Promise<void> {
 }
 
 test.each([
-  ['a step kind of a later version', withSteps({ kind: 'kick', amplitude_urad: 2000 }), '2.kick: kick cannot be run by this version'],
+  [
+    'a step kind of a later version',
+    withSteps({ kind: 'rotate', period_s: 1800, turns: 2 }),
+    '2.rotate: rotate cannot be run by this version',
+  ],
   ['a station the rig does not have', withSteps({ kind: 'swing', to: 'atlantis' }), '2.swing: The rig has no station "atlantis"'],
   [
     'a beat without a swing',

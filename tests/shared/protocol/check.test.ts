@@ -197,9 +197,7 @@ describe('repeats', () => {
 
 describe('what is not built yet is valid in the format and refused as not-yet', () => {
   test.each<[string, unknown, string]>([
-    ['kick', { kind: 'kick', amplitude_urad: 2000 }, '2.kick'],
     ['rotate', { kind: 'rotate', period_s: 1800, turns: 2 }, '2.rotate'],
-    ['a shaped swing', { kind: 'swing', to: 'near', profile: 'shaped' }, '2.swing'],
     ['a camera frame', { kind: 'mark', label: 'x', frame: true }, '2.mark'],
     ['shuffling', { kind: 'repeat', times: 2, order: 'shuffled', steps: [repeat(1, dwell)] }, '2.repeat'],
   ])('%s', (_, step, path) => {

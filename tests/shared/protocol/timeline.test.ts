@@ -195,7 +195,7 @@ describe('drafts', () => {
       steps: [
         { kind: 'swing', to: 'nowhere' },
         { kind: 'dwell', for_s: 60 },
-        { kind: 'kick', amplitude_urad: 2000 },
+        { kind: 'kick', amplitude_urad: 2e6 },
         { kind: 'prompt', text: 'x' },
       ],
     });
