@@ -19,6 +19,8 @@ export interface StepSpan {
   station: string;
   /** Path of the first time in the run, as the strip names it. */
   firstKey: string;
+  /** Turntable angle when it begins the first time, deg. */
+  fromDeg: number;
 }
 
 export interface Plan {
@@ -66,22 +68,30 @@ function spansOf(items: readonly TimelineItem[]): Map<string, StepSpan> {
   const begins = new Map<string, number>();
   for (const item of items) {
     const known = spans.get(item.documentPath);
-    if (known !== undefined) known.count += 1;
-    else
+    const begin = begins.get(item.documentPath) ?? item.startUtcMs;
+    // Parts of a shaped swing or a kick are one step.
+    const goesOn = item.part !== undefined && known !== undefined && !item.path.endsWith('.a');
+    if (goesOn && known.count === 1) Object.assign(known, { durationS: (item.endUtcMs - begin) / 1000, station: item.station });
+    else if (known !== undefined && !goesOn) known.count += 1;
+    else if (known === undefined) {
+      begins.set(item.documentPath, item.startUtcMs);
       spans.set(item.documentPath, {
         durationS: (item.endUtcMs - item.startUtcMs) / 1000,
         count: 1,
         station: item.station,
         firstKey: item.path,
+        fromDeg: item.angleFromDeg,
       });
+    }
     for (const repeat of repeatsAround(item.documentPath)) {
-      const begin = begins.get(repeat) ?? item.startUtcMs;
-      begins.set(repeat, begin);
+      const first = begins.get(repeat) ?? item.startUtcMs;
+      begins.set(repeat, first);
       spans.set(repeat, {
-        durationS: (item.endUtcMs - begin) / 1000,
+        durationS: (item.endUtcMs - first) / 1000,
         count: 1,
         station: item.station,
         firstKey: spans.get(repeat)?.firstKey ?? item.path,
+        fromDeg: spans.get(repeat)?.fromDeg ?? item.angleFromDeg,
       });
     }
   }

@@ -30,6 +30,7 @@ export function StepDetails({ path }: { path: StepPath }) {
         key={`${path.join('.')} ${step.kind}`}
         step={step}
         rig={editor.rig?.document ?? null}
+        fromDeg={span?.fromDeg ?? null}
         disabled={!editor.mayWrite}
         onChange={(next) => editor.replace(path, next)}
       />

@@ -26,6 +26,7 @@ export const kindUses: Partial<Record<StepKind, string>> = {
   home: 'Find the home edge: the position becomes known.',
   swing: 'Turn the sources to a station or an angle.',
   dwell: 'Stand still and measure. Counted in the reversals.',
+  kick: 'Set the pendulum swinging and record how it rings down: period and decay.',
   settle: 'Wait for creep and heat to die down, for a time or until calm. Not evaluated.',
   wait: 'Go on at a time of day in the lab, or when a channel is quiet.',
   proof: 'Say after the first pair whether the night is worth running.',

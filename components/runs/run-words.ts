@@ -57,6 +57,15 @@ function swingTarget(row: Pick<StepRowView, 'station' | 'path'>, protocol: Targe
   return step?.kind === 'swing' ? targetWords(step.to) : '';
 }
 
+/** Of a step in several moves: which one, or that the sources stand between two. */
+function moveName({ path, kind }: Pick<StepRowView, 'path' | 'kind'>, protocol: TargetSource | null): string {
+  const name = /\.([a-z]{1,2})$/.exec(path)?.[1];
+  if (name !== undefined) return `, move ${name}`;
+  const at = protocol === null || path === 'atEnd.swing' ? null : parseStepPath(path);
+  const step = at === null || protocol === null ? null : stepAt(protocol, at);
+  return kind === 'kick' || (step?.kind === 'swing' && step.profile === 'shaped') ? ', between two moves' : '';
+}
+
 /** A row of the log as a title: `Dwell, near side`, `Swing to far`, `Swing to near, cut short`, `Wait`. */
 export function stepTitle(row: TitledRow, protocol: TargetSource | null): string {
   const side = laneOf(row.station) === 'other' ? (row.station === '' ? '' : ` at ${row.station}`) : `, ${row.station} side`;
@@ -65,12 +74,14 @@ export function stepTitle(row: TitledRow, protocol: TargetSource | null): string
       return 'Home: finding the edge';
     case 'swing': {
       const target = swingTarget(row, protocol);
-      return `Swing${target === '' ? '' : ` to ${target}`}${row.outcome === 'cut short' ? ', cut short' : ''}`;
+      return `Swing${target === '' ? '' : ` to ${target}`}${moveName(row, protocol)}${row.outcome === 'cut short' ? ', cut short' : ''}`;
     }
     case 'mark':
       return row.label === '' ? 'Mark' : `Mark: ${row.label}`;
     case 'ring-down':
       return `Ring-down${side}`;
+    case 'kick':
+      return `Kick${moveName(row, protocol)}`;
     default:
       return capital(row.kind) + (['wait', 'proof', 'prompt'].includes(row.kind) ? '' : side);
   }

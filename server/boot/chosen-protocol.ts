@@ -3,7 +3,7 @@ import { NotYetError } from '@/shared/lib/not-yet-error';
 import { checkDocumentText } from '@/shared/protocol/check';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { Finding } from '@/shared/protocol/finding';
-import { templateById, templates, templatesNotYet } from '@/shared/protocol/templates';
+import { templateById, templates } from '@/shared/protocol/templates';
 import { checkRigText } from '@/shared/rig/check';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import type { RigDocument } from '@/shared/rig/document';
@@ -49,10 +49,6 @@ export function chosenProtocol({ positionals, template, rig: rigFile, usage }: C
 function fromTemplate(id: string, rig: RigDocument): Choice {
   const template = templateById(id);
   if (template !== undefined) return { document: template.make(rig), rig: template.rigFor(rig) };
-  if (templatesNotYet.includes(id))
-    throw new NotYetError(
-      `The template "${id}" needs steps that are not built yet. Built are: ${templates.map((each) => each.id).join(', ')}.`,
-    );
   throw new Unusable(`There is no template "${id}". There are: ${templates.map((each) => each.id).join(', ')}.`);
 }
 

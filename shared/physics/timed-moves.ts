@@ -57,7 +57,7 @@ export function torqueCentroidS({ geometry }: PendulumSetting, slew: Slew, { fro
   const torqueAt = (tS: number) => torquePerG(geometry, move.angleDegAt(tS) * RAD_PER_DEG);
   const first = torqueAt(0);
   const change = torqueAt(move.durationS) - first;
-  if (Math.abs(change) < 1e-12 * Math.abs(first)) return move.durationS / 2;
+  if (Math.abs(change) <= 1e-12 * Math.abs(first)) return move.durationS / 2;
   const stepS = move.durationS / centroidPieces;
   let area = 0;
   for (let piece = 0; piece < centroidPieces; piece += 1) area += (torqueAt((piece + 0.5) * stepS) - first) * stepS;

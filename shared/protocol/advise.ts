@@ -2,6 +2,7 @@ import { oscillatorOf } from '../physics/oscillator';
 import { inflation } from '../planning/night-noise';
 import type { RigDocument } from '../rig/document';
 import { adviseDocument } from './advise-document';
+import { shapedPeriodUnknown } from './advise-parts';
 import { adviseSurroundings, type Surroundings } from './advise-surroundings';
 import type { ProtocolDocument } from './document';
 import { type Finding, withoutRepeats } from './finding';
@@ -28,7 +29,7 @@ const equalLengths = 0.05;
 
 /**
  * Where a protocol that can be carried out is weak: `cycle-pumps`, `dwell-short`, `no-ring-down`, `unequal-sides`, `drift-not-cancelled`,
- * `other-side`, and what `adviseDocument` and `adviseSurroundings` find. Each message is two sentences, the number that triggered it and what would be better. Takes drafts; what cannot be told from them is left unsaid.
+ * `other-side`, `shaped-period-unknown`, and what `adviseDocument` and `adviseSurroundings` find. Each message is two sentences, the number that triggered it and what would be better. Takes drafts; what cannot be told from them is left unsaid.
  */
 export function adviseProtocol(document: ProtocolDocument, rig: RigDocument, start: AdviceStart): Finding[] {
   const timeZone = start.timeZone ?? 'UTC';
@@ -42,6 +43,7 @@ export function adviseProtocol(document: ProtocolDocument, rig: RigDocument, sta
     ...unequalSides(sides),
     ...driftNotCancelled(sides),
     ...onePerStep(otherSide(items, rig)),
+    ...shapedPeriodUnknown(document, rig),
     ...adviseDocument(document, rig),
     ...adviseSurroundings(start, { startUtcMs, endUtcMs, timeZone, reverses: new Set(sides.map(({ side }) => side)).size > 1 }),
   ]);

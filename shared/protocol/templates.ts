@@ -2,6 +2,7 @@ import type { RigDocument } from '../rig/document';
 import type { ProtocolDocument, Step } from './document';
 import { swingMove, UnplayableStep } from './durations';
 import { pathObstacles } from './motion-path';
+import { partsIfPossible, shapedMoveCount } from './step-parts';
 
 export interface Template {
   id: string;
@@ -211,11 +212,76 @@ const afternoon: Template = {
   rigFor: asItIs,
 };
 
-/** The built-in templates, in the order in which they are offered. */
-export const templates: readonly Template[] = [nearFar, nearFarShort, proof, scan, still, fourStation, afternoon, emptyControl];
+/** Shaped swings take half a period more for each move beyond the first; a beat of three periods makes room for three. */
+const shaped: Template = {
+  id: 'shaped',
+  name: 'Shaped reversals',
+  summary:
+    'The overnight reversals with swings that leave the pendulum nearly at rest, at the same beat: for a readout that is not linear, a high Q, or to check the plain ones.',
+  make: (rig) => {
+    const inTwo = shapedMoveCount(rig) === 2;
+    const reversalTo = (to: string): Step[] => [
+      { kind: 'swing', to, profile: 'shaped' },
+      { kind: 'dwell', beat_periods: inTwo ? 2 : 3 },
+    ];
+    const shapedPair = [...reversalTo('far'), ...reversalTo('near')];
+    // As long a night as the plain one: 16 pairs at two periods are 10 or 11 at three.
+    return document('Shaped reversals', {
+      notes: '',
+      ...atClear(rig),
+      steps: [
+        { kind: 'home' },
+        swing('near'),
+        ...shapedPair,
+        { kind: 'proof' },
+        calm(usualCalmS),
+        ...kick(rig, 'near', 4),
+        { kind: 'repeat', times: inTwo ? 16 : 10, steps: shapedPair },
+        ...kick(rig, 'near', 4),
+      ],
+    });
+  },
+  rigFor: asItIs,
+};
 
-/** Built-in templates of the format that make no sense without steps this version does not carry out yet. */
-export const templatesNotYet: readonly string[] = ['shaped', 'time-of-swing'];
+const timeOfSwing: Template = {
+  id: 'time-of-swing',
+  name: 'Time of swing',
+  summary:
+    'Ring-downs with the sources in line with the arm and across it, four times: G from the two periods alone, without lever and scale. For a rig that turns freely.',
+  make: (rig) => {
+    const ring = (station: string): Step[] => [swing(station), ...kick(rig, station, 6)];
+    return document('Time of swing', {
+      notes: '',
+      evaluation: { method: 'period', channel: 'deflection' },
+      steps: [{ kind: 'home' }, { kind: 'repeat', times: 4, steps: [...ring('inline'), ...ring('across')] }],
+    });
+  },
+  rigFor: asItIs,
+};
+
+/** A kick at a station: 2 mrad, or less where the sources of the rig cannot give that; none where its pendulum is not measured. */
+function kick(rig: RigDocument, station: string, periods: number): Step[] {
+  const step = (amplitude: number): Step => ({ kind: 'kick', amplitude_urad: amplitude, periods });
+  const angleDeg = rig.stations[station]?.value;
+  if (angleDeg === undefined || rig.motion === undefined) return [step(2000)];
+  const amplitude = [2000, 1000, 500, 200, 100, 50, 20, 10].find((each) => partsIfPossible(step(each), rig, angleDeg) !== null);
+  return amplitude === undefined ? [] : [step(amplitude)];
+}
+
+/** The built-in templates, in the order in which they are offered. */
+export const templates: readonly Template[] = [
+  nearFar,
+  nearFarShort,
+  proof,
+  scan,
+  still,
+  shaped,
+  fourStation,
+  afternoon,
+  timeOfSwing,
+  emptyControl,
+];
 
 /** The template with this id; undefined where there is none. */
 export function templateById(id: string): Template | undefined {

@@ -74,7 +74,8 @@ function timelineItem(
   at: { before: PlanState; after: PlanState; station: string },
 ): TimelineItem {
   const item: TimelineItem = {
-    path,
+    // A pause has no row in the log, and no name of its own there.
+    path: part?.kind === 'pause' ? `${path} pause ${part.offsetS}` : path,
     documentPath,
     kind: part?.kind === 'ring-down' ? 'ring-down' : step.kind,
     ...(part === undefined ? {} : { part: part.kind }),

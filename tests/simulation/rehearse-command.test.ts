@@ -188,7 +188,6 @@ describe('unusable input ends with 2, a sentence, and no folder', () => {
     ['no protocol', [], 'No protocol was given'],
     ['a file and a template', [short(), '--template', 'near-far'], 'one of the two is needed'],
     ['an unknown template', ['--template', 'swings'], 'There is no template "swings"'],
-    ['a template that is not built', ['--template', 'shaped'], 'not built yet'],
     ['a file that is not there', [at('nowhere.json')], 'cannot be read'],
     ['a file that is no JSON', [file('broken.json', '{"formatVersion": 1,')], 'Line 1'],
     [

@@ -3,6 +3,7 @@ import { Body, Field, Label } from '@/components/ui';
 import type { Step } from '@/shared/protocol/document';
 import type { RigDocument } from '@/shared/rig/document';
 import { DwellForm } from './dwell-form';
+import { KickForm } from './kick-form';
 import { PromptForm } from './prompt-form';
 import { ProofForm } from './proof-form';
 import { RepeatForm } from './repeat-form';
@@ -14,14 +15,16 @@ export interface StepFormProps<S extends Step = Step> {
   step: S;
   onChange: (step: Step) => void;
   rig: RigDocument | null;
+  /** Turntable angle when the step begins by plan, deg; null where the plan does not tell. */
+  fromDeg: number | null;
   disabled: boolean;
 }
 
 /** The fields of one step. */
-export function StepForm({ step, onChange, rig, disabled }: StepFormProps) {
+export function StepForm({ step, onChange, rig, fromDeg, disabled }: StepFormProps) {
   return (
     <View className="gap-5">
-      <OwnFields step={step} onChange={onChange} rig={rig} disabled={disabled} />
+      <OwnFields step={step} onChange={onChange} rig={rig} fromDeg={fromDeg} disabled={disabled} />
       <Field
         label={step.kind === 'mark' ? 'Text in the log' : 'Label in the log'}
         value={step.label ?? ''}
@@ -35,13 +38,15 @@ export function StepForm({ step, onChange, rig, disabled }: StepFormProps) {
   );
 }
 
-function OwnFields({ step, onChange, rig, disabled }: StepFormProps) {
-  const common = { onChange, rig, disabled };
+function OwnFields({ step, onChange, rig, fromDeg, disabled }: StepFormProps) {
+  const common = { onChange, rig, fromDeg, disabled };
   switch (step.kind) {
     case 'swing':
       return <SwingForm step={step} {...common} />;
     case 'dwell':
       return <DwellForm step={step} {...common} />;
+    case 'kick':
+      return <KickForm step={step} {...common} />;
     case 'settle':
       return <SettleForm step={step} {...common} />;
     case 'wait':

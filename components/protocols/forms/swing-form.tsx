@@ -1,6 +1,8 @@
 import { View } from 'react-native';
-import { Label, Select } from '@/components/ui';
+import { Label, Select, Tabs } from '@/components/ui';
 import { formatDegrees } from '@/shared/lib/format-angle';
+import { formatDuration } from '@/shared/lib/format-duration';
+import { shapedForecast } from '@/shared/planning/shaped-forecast';
 import type { SwingStep } from '@/shared/protocol/document';
 import type { RigDocument } from '@/shared/rig/document';
 import { NumberField } from './number-field';
@@ -21,7 +23,7 @@ function targetOptions(rig: RigDocument | null, present: string) {
 }
 
 /** Where the sources go, and how fast. */
-export function SwingForm({ step, onChange, rig, disabled }: StepFormProps<SwingStep>) {
+export function SwingForm({ step, onChange, rig, fromDeg, disabled }: StepFormProps<SwingStep>) {
   const choice = typeof step.to === 'string' ? step.to : angleChoice;
   const motion = rig?.motion;
   const choose = (next: string) =>
@@ -66,19 +68,40 @@ export function SwingForm({ step, onChange, rig, disabled }: StepFormProps<Swing
         />
       </View>
       <Label>Left empty, the rig’s own greatest speed and acceleration hold.</Label>
-      {step.profile === 'shaped' ? (
-        <Select
-          label="Profile"
-          value="shaped"
-          options={[
-            { value: 'shaped', label: 'shaped (not in this version)' },
-            { value: 'plain', label: 'plain' },
-          ]}
-          onChange={(profile) => onChange({ ...step, profile: profile as 'plain' | 'shaped' })}
-          disabled={disabled}
-        />
-      ) : null}
+      <Tabs
+        label="Profile"
+        value={step.profile ?? 'plain'}
+        options={[
+          { value: 'plain', label: 'Plain' },
+          { value: 'shaped', label: 'Shaped' },
+        ]}
+        onChange={disabled ? () => undefined : (profile) => onChange(withProfile(step, profile))}
+        testID="swing-profile"
+      />
+      <Label testID="swing-forecast">
+        {step.profile === 'shaped' ? shapedWords(step, rig, fromDeg) : 'One move; the pendulum rings down in the dwell after it.'}
+      </Label>
     </View>
+  );
+}
+
+/** Plain is what the format takes where nothing is said. */
+function withProfile({ profile: _, ...rest }: SwingStep, profile: 'plain' | 'shaped'): SwingStep {
+  return profile === 'plain' ? rest : { ...rest, profile };
+}
+
+const percent = (share: number) => (share < 5e-4 ? 'less than 0.1 %' : `${(100 * share).toPrecision(2)} %`);
+
+/** What the shaped swing is by plan, what it leaves, and how that hangs on the period. */
+function shapedWords(step: SwingStep, rig: RigDocument | null, fromDeg: number | null): string {
+  const what = 'Several moves that leave the pendulum nearly at rest.';
+  const found = rig === null || fromDeg === null ? null : shapedForecast(step, rig, fromDeg);
+  if (found === null) return what;
+  const known =
+    found.atU === null ? '' : `, ${percent(found.atU.residual)} if it is off by its u of ${(100 * found.atU.relativeU).toPrecision(2)} %`;
+  return (
+    `${what} By plan ${found.moves === 2 ? 'two' : 'three'} in ${formatDuration(found.durationS)}: ${percent(found.residual)} of the step is left as ringing` +
+    `${known}, ${percent(found.atOnePercent)} if the period is off by 1 %.`
   );
 }
 

@@ -122,7 +122,6 @@ describe('unusable input ends with 2, nothing on stdout and the reason on stderr
     ['file and template', () => [file('a.json', pairs({ kind: 'dwell', for_s: 600 })), '--template', 'still'], 'one of the two'],
     ['an unknown option', () => ['--template', 'still', '--speed', '9'], '--speed'],
     ['an unknown template', () => ['--template', 'nearfar'], 'near-far-short'],
-    ['a template that is not built yet', () => ['--template', 'time-of-swing'], 'not-yet'],
     ['a file that is not there', () => [join(folder, 'missing.json')], 'missing.json cannot be read'],
     ['a file that is no JSON', () => [file('b.json', '{"formatVersion": 1,\n "name": }')], 'Line 2, column 10'],
     [

@@ -20,7 +20,7 @@ const protocol: ProtocolDocument = {
 };
 const plan = planTimeline({ protocol, rig: demoRigWide, timeZone: 'UTC' }, { utcMs: startUtcMs, angleDeg: 0 });
 const secondsTo = (path: string, part: string) => {
-  const item = plan.items.find((each) => each.path === path && (each.part ?? '') === part);
+  const item = plan.items.find((each) => (each.path === path || each.path.startsWith(`${path} pause`)) && (each.part ?? '') === part);
   if (item === undefined) throw new Error(`no ${part} at ${path}`);
   return { from: (item.startUtcMs - startUtcMs) / 1000, to: (item.endUtcMs - startUtcMs) / 1000 };
 };

@@ -123,6 +123,24 @@ test('a repeat that ends by the u it has reached: u of 20 passes is known to 16 
   expect(messageOf(50)).toContain('from 50 passes on, where u itself is known to 10 % only');
 });
 
+describe('shaped-period-unknown', () => {
+  const shaped: Step[] = [{ kind: 'swing', to: 'far', profile: 'shaped' }, beat(2)];
+  const found = (u: number | null) => {
+    const period_s = u === null ? {} : { period_s: { value: T, u, unit: 's' as const } };
+    const { period_s: _, ...measured } = demoRigWide.measured ?? {};
+    const rig = { ...demoRigWide, measured: { ...measured, ...period_s } };
+    return adviseProtocol({ formatVersion: 1, name: 'Test', steps: [swing('near'), beat(2), ...shaped] }, rig, { utcMs: 0, angleDeg: 0 })
+      .filter(({ code }) => code === 'shaped-period-unknown')
+      .map(({ path, message }) => `${path} ${message.slice(0, 45)}`);
+  };
+
+  test('two moves want the period to 0.7 %', () => {
+    expect(found(0.0069 * T)).toEqual([]);
+    expect(found(0.0071 * T)).toEqual(['3.swing The period of this rig is known to 0.71 %, an']);
+    expect(found(null)).toEqual(['3.swing The period of this rig is not measured, and a']);
+  });
+});
+
 describe('unequal-sides', () => {
   test('dwells of different lengths', () => {
     const [finding, ...others] = advice([{ kind: 'repeat', times: 4, steps: [swing('far'), dwell(830), swing('near'), dwell(1250)] }]);

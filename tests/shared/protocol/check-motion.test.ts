@@ -199,3 +199,40 @@ describe('lengths in periods', () => {
     expect(places([home, near, far, { kind: 'dwell', beat_periods: 0.024 }])).toEqual([]);
   });
 });
+
+describe('kicks and shaped swings', () => {
+  const shaped: Step = { kind: 'swing', to: 'far', profile: 'shaped' };
+  const kick = (amplitude: number): Step => ({ kind: 'kick', amplitude_urad: amplitude });
+
+  test('are accepted where the rig allows them, and a beat counts from the first move', () => {
+    expect(places([home, near, kick(2000), shaped, beat])).toEqual([]);
+    expect(places([home, near, shaped, { kind: 'dwell', beat_periods: 0.5 }])).toEqual(['beat-too-short 4.dwell']);
+  });
+
+  // D/(1 − K) = 2.3738 mrad / (1 − 0.8214) (design reference A4, A8).
+  test('a kick beyond what any number of moves gives is refused with the limit', () => {
+    const [finding] = check([home, near, kick(20_000)]);
+    expect(finding).toMatchObject({ code: 'kick-too-large', path: '3.kick' });
+    expect(finding?.message).toMatch(/amplitude_urad below 1329\d/);
+  });
+
+  test('a shaped swing between equal rests is refused, and both without a measured decay', () => {
+    expect(places([home, near, { kind: 'swing', to: 'nearBack', profile: 'shaped' }])).toEqual(['shaped-impossible 3.swing']);
+    const { decayTime_s: _, ...measured } = demoRigWide.measured ?? {};
+    expect(places([home, near, kick(2000), shaped], { ...demoRigWide, measured })).toEqual([
+      'period-missing 3.kick',
+      'period-missing 4.swing',
+    ]);
+  });
+
+  test('a kick keeps to the limits of the table, and waits for homing where the position is not known', () => {
+    expect(places([home, kick(500)], withMotion({ maxDeg: 15, minDeg: -15 })).includes('out-of-limits 2.kick')).toBe(true);
+    const findings = checkProtocol(protocol([kick(500), home]), demoRigWide, { angleDeg: null });
+    expect(findings.map(({ code, path }) => `${code} ${path}`)).toContain('home-first 1.kick');
+  });
+
+  test('an empty control makes the same moves', () => {
+    const empty: RigDocument = { ...demoRigWide, sources: { shape: 'none', count: 2 } };
+    expect(places([home, near, kick(2000), shaped, beat], empty)).toEqual([]);
+  });
+});

@@ -1,6 +1,6 @@
 import { checkProtocol } from '@/shared/protocol/check';
 import type { Step } from '@/shared/protocol/document';
-import { templateById, templates, templatesNotYet } from '@/shared/protocol/templates';
+import { templateById, templates } from '@/shared/protocol/templates';
 import { planTimeline } from '@/shared/protocol/timeline';
 import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
 import { rigDocumentSchema } from '@/shared/rig/document';
@@ -18,17 +18,16 @@ test.each(templates.map((template) => [template.id, template] as const))(
   },
 );
 
-test('all but the four stations can be carried out on the close rig', () => {
+test('all but those for a rig that turns freely can be carried out on the close rig', () => {
   const refused = templates.filter((template) => checkProtocol(template.make(demoRigNarrow), demoRigNarrow).length > 0);
-  expect(refused.map(({ id }) => id)).toEqual(['four-station']);
+  expect(refused.map(({ id }) => id)).toEqual(['four-station', 'time-of-swing']);
   expect(checkProtocol(make('four-station', demoRigNarrow), demoRigNarrow).map(({ code }) => code)).toEqual(
     expect.arrayContaining(['unknown-station']) as string[],
   );
 });
 
-test('ids are unique, and those that make no sense yet are not listed', () => {
+test('ids are unique', () => {
   expect(new Set(templates.map(({ id }) => id)).size).toBe(templates.length);
-  for (const id of templatesNotYet) expect(templateById(id)).toBeUndefined();
 });
 
 test('near-far-short: home, near, six pairs of far and near at a beat of two periods', () => {
@@ -57,6 +56,28 @@ test('four-station: 184 dwells in 23 blocks after the first pair, near and far a
   expect(timeline.dwells).toBe(2 + 184);
   const sides = timeline.items.filter(({ kind }) => kind === 'dwell').map(({ station }) => station.slice(0, 3));
   expect(sides.every((side, index) => side !== sides[index - 1])).toBe(true);
+});
+
+test('shaped: 34 dwells at the beat of the plain night; three moves and three periods where the period is not known', () => {
+  const timelineOf = (rig: typeof demoRigWide) =>
+    planTimeline({ protocol: make('shaped', rig), rig, timeZone: 'UTC' }, { utcMs: 0, angleDeg: 0 });
+  const night = timelineOf(demoRigWide);
+  expect(night.dwells).toBe(34);
+  // Practice: two moves and their pause take 232 s of a beat of 840 s on a slower rig; this one turns in 6 s.
+  const dwell = night.items.findLast(({ kind }) => kind === 'dwell');
+  expect(((dwell?.endUtcMs ?? 0) - (dwell?.startUtcMs ?? 0)) / 1000).toBeCloseTo(840 - 217.4, 0);
+  const period_s = { value: 420, u: 5, unit: 's' as const };
+  const unsure = { ...demoRigWide, measured: { ...demoRigWide.measured, period_s } };
+  expect(timelineOf(unsure).dwells).toBe(22);
+  expect(timelineOf(unsure).items.filter(({ path }) => path === '3.swing.c')).toHaveLength(1);
+  expect(checkProtocol(make('shaped', unsure), unsure)).toEqual([]);
+});
+
+test('time-of-swing: eight ring-downs of six periods, by turns in line and across', () => {
+  const { items } = planTimeline({ protocol: make('time-of-swing'), rig: demoRigWide, timeZone: 'UTC' }, { utcMs: 0, angleDeg: 0 });
+  const rings = items.filter(({ kind }) => kind === 'ring-down');
+  expect(rings.map(({ angleToDeg }) => angleToDeg)).toEqual([0, 90, 0, 90, 0, 90, 0, 90]);
+  for (const { startUtcMs, endUtcMs } of rings) expect((endUtcMs - startUtcMs) / 1000).toBeCloseTo(2520, 3);
 });
 
 test('still: an hour of settling, then 32 dwells without a motion', () => {
