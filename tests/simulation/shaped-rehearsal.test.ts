@@ -10,7 +10,8 @@ const stepRad = 0.002373825686861;
 /** Half of peak to peak of the deflection in a row of the log, rad, on a rig without noise. */
 async function ringing(steps: Step[], path: string): Promise<number> {
   const protocol: ProtocolDocument = { formatVersion: 1, name: 'Shaped', steps };
-  const { noise: _, ...rig } = demoRigWide;
+  const rig = { ...demoRigWide };
+  delete rig.noise;
   const records = await rehearse({ start: { ...rehearsalStart(protocol), rig }, startUtcMs }, rehearsalParts());
   const row = records.steps.find((each) => each.path === path);
   const channel = records.channels.find(({ info }) => info.role === 'deflection');

@@ -43,7 +43,8 @@ export function KickForm({ step, onChange, rig, fromDeg, disabled }: StepFormPro
     else onChange({ ...rest, ...(to === undefined ? {} : { to }) });
   };
   const withoutPeriods = () => {
-    const { periods: _, ...rest } = step;
+    const rest = { ...step };
+    delete rest.periods;
     return rest;
   };
   return (

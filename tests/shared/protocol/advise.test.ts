@@ -127,7 +127,8 @@ describe('shaped-period-unknown', () => {
   const shaped: Step[] = [{ kind: 'swing', to: 'far', profile: 'shaped' }, beat(2)];
   const found = (u: number | null) => {
     const period_s = u === null ? {} : { period_s: { value: T, u, unit: 's' as const } };
-    const { period_s: _, ...measured } = demoRigWide.measured ?? {};
+    const measured = { ...demoRigWide.measured };
+    delete measured.period_s;
     const rig = { ...demoRigWide, measured: { ...measured, ...period_s } };
     return adviseProtocol({ formatVersion: 1, name: 'Test', steps: [swing('near'), beat(2), ...shaped] }, rig, { utcMs: 0, angleDeg: 0 })
       .filter(({ code }) => code === 'shaped-period-unknown')

@@ -218,7 +218,8 @@ describe('kicks and shaped swings', () => {
 
   test('a shaped swing between equal rests is refused, and both without a measured decay', () => {
     expect(places([home, near, { kind: 'swing', to: 'nearBack', profile: 'shaped' }])).toEqual(['shaped-impossible 3.swing']);
-    const { decayTime_s: _, ...measured } = demoRigWide.measured ?? {};
+    const measured = { ...demoRigWide.measured };
+    delete measured.decayTime_s;
     expect(places([home, near, kick(2000), shaped], { ...demoRigWide, measured })).toEqual([
       'period-missing 3.kick',
       'period-missing 4.swing',
