@@ -1,5 +1,4 @@
 import { readFileSync } from 'node:fs';
-import { NotYetError } from '@/shared/lib/not-yet-error';
 import { checkDocumentText } from '@/shared/protocol/check';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { Finding } from '@/shared/protocol/finding';
@@ -31,7 +30,7 @@ export interface ChoiceArguments {
 
 /**
  * The protocol and rig that were asked for.
- * @throws Unusable, NotYetError
+ * @throws Unusable
  */
 export function chosenProtocol({ positionals, template, rig: rigFile, usage }: ChoiceArguments): Choice {
   const rig = rigFile === undefined ? demoRigWide : readRig(rigFile);
