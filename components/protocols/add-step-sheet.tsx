@@ -9,7 +9,7 @@ import type { RigDocument } from '@/shared/rig/document';
 import { useEditor } from './editor-context';
 import { kindNames, kindUses, stepIcons, stepTitle } from './step-words';
 
-const kinds: readonly StepKind[] = ['swing', 'dwell', 'repeat', 'settle', 'wait', 'proof', 'prompt', 'home', 'mark'];
+const kinds: readonly StepKind[] = ['swing', 'dwell', 'kick', 'repeat', 'settle', 'wait', 'proof', 'prompt', 'home', 'mark'];
 
 /** A repeat with nothing in it cannot be saved, so a new one begins with a pair; a first swing goes to the other side than the last. */
 function freshStep(kind: StepKind, rig: RigDocument, lastTarget: string): Step {
