@@ -93,7 +93,7 @@ async function closeIfIdle(one: Idle): Promise<void> {
 export async function openBrowser(baseURL: string, size: Size, installs = false): Promise<Browser> {
   const key = `${size} ${baseURL}`;
   const { context, page } = await blankPage(baseURL, installs ? '' : key, () => launch(baseURL, size, installs));
-  page.setDefaultTimeout(15_000);
+  page.setDefaultTimeout(30_000);
   const errors: string[] = [];
   page.on('pageerror', (error) => errors.push(String(error)));
   page.on('console', (message) => {

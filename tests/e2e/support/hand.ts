@@ -204,7 +204,7 @@ export class Hand {
 }
 
 /** Waits until a condition holds, looking again often. */
-export async function until(holds: () => Promise<boolean> | boolean, what: string | (() => string), withinMs = 15_000): Promise<void> {
+export async function until(holds: () => Promise<boolean> | boolean, what: string | (() => string), withinMs = 30_000): Promise<void> {
   const endMs = performance.now() + withinMs;
   for (;;) {
     if (await holds()) return;
