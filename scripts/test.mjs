@@ -15,15 +15,17 @@ const whole = args.length === 0;
 /** A real browser, pseudo-terminal, process or socket: the tests that wait for the machine itself. */
 const inRealTime = /tests\/(e2e|contract|server\/(boot|http))\//;
 const start = Date.now();
-await ensureNodeModules();
-await ensureDebianPackages(['postgresql', 'chromium-headless-shell', 'socat', 'ser2net', 'g++', 'gcc-avr', 'avr-libc']);
 const output = join(root, 'test-output');
 mkdirSync(output, { recursive: true });
-
-const cluster = await startCluster('test');
+/** Debian's packages and the cluster need nothing of npm's. */
+async function machine() {
+  await ensureDebianPackages(['postgresql', 'chromium-headless-shell', 'socat', 'ser2net', 'g++', 'gcc-avr', 'avr-libc']);
+  return startCluster('test');
+}
+const [cluster] = await Promise.all([machine(), ensureNodeModules()]);
 const env = { ...process.env, EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres'), TZ: 'UTC' };
 /** The row with the browser is the longest and the only one in real time: the others stand back for it. */
-const standingBack = (command, args, options) => pass('nice', ['-n', '10', command, ...args], options);
+const standingBack = (command, args, options) => pass('nice', ['-n', '19', command, ...args], options);
 const jest = (more, report, run = pass) =>
   run(
     process.execPath,

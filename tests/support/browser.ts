@@ -21,8 +21,8 @@ const flags = [
   '--disable-background-networking',
   '--disable-component-update',
   '--disable-sync',
-  // Pages live for seconds: compiling their program with much care costs more than it gives back.
-  '--js-flags=--no-maglev,--no-opt',
+  // Pages live for seconds: neither compiling their program with much care nor collecting their garbage often gives back what it costs.
+  '--js-flags=--no-maglev,--no-opt,--always-sparkplug,--min-semi-space-size=32',
 ];
 
 export interface Browser {
