@@ -7,6 +7,8 @@ import { PortList } from './port-list';
 import { wrongFields } from './link-words';
 import { NetworkFields, type NetworkLink } from './network-fields';
 
+type SerialLink = Extract<LinkSettings, { kind: 'serial' }>;
+
 interface LinkFormProps {
   link: LinkSettings;
   onChange: (link: LinkSettings) => void;
@@ -27,24 +29,29 @@ const numberOf = (text: string) => (/^\s*\d+\s*$/.test(text) ? Number(text) : Na
 
 /** A controller inside the server, a serial line by its path and speed, or a network serial server. What was typed for the line survives a look at the other choice. */
 export function LinkForm({ link, onChange, errors }: LinkFormProps) {
-  const [path, setPath] = useState(link.kind === 'serial' ? link.path : '');
-  const [baud, setBaud] = useState(String(link.kind === 'serial' ? link.baudRate : usualBaud));
+  const [line, setLine] = useState<SerialLink>(link.kind === 'serial' ? link : { kind: 'serial', path: '', baudRate: usualBaud });
+  const [path, setPath] = useState(line.path);
+  const [baud, setBaud] = useState(String(line.baudRate));
   const [network, setNetwork] = useState<NetworkLink>(
     link.kind === 'tcp' ? link : { kind: 'tcp', host: '', port: NaN, mode: 'raw', baudRate: usualBaud },
   );
   const [port, setPort] = useState(link.kind === 'tcp' ? String(link.port) : '');
   const wrong = { ...wrongFields(link), ...errors };
-  const serial = (change: { path?: string; baud?: string }) => {
-    const next = { path, baud, ...change };
-    setPath(next.path);
-    setBaud(next.baud);
-    onChange({ kind: 'serial', path: next.path.trim(), baudRate: numberOf(next.baud) });
+  /** What has no field here, the levels of the control lines, stays as it was. */
+  const serial = (next: SerialLink) => {
+    setLine(next);
+    onChange(next);
   };
-  const choosePort = (found: SerialPortView) => {
-    const chosen = found.stablePath ?? found.path;
-    setPath(chosen);
-    onChange({ kind: 'serial', path: chosen, baudRate: numberOf(baud), ...(found.usb === null ? {} : { usb: found.usb }) });
+  const typeBaud = (text: string) => {
+    setBaud(text);
+    serial({ ...line, baudRate: numberOf(text) });
   };
+  /** Another path is another device: the one that was known under the old path is no longer looked for. */
+  const typePath = (text: string, usb?: SerialLink['usb']) => {
+    setPath(text);
+    serial({ ...line, path: text.trim(), usb });
+  };
+  const choosePort = (found: SerialPortView) => typePath(found.stablePath ?? found.path, found.usb ?? undefined);
   const overNetwork = (next: NetworkLink) => {
     setNetwork(next);
     onChange(next);
@@ -54,7 +61,7 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
     overNetwork({ ...network, port: numberOf(text) });
   };
   const choose = (kind: LinkSettings['kind']) => {
-    if (kind === 'serial') return serial({});
+    if (kind === 'serial') return serial(line);
     return kind === 'tcp' ? overNetwork(network) : onChange({ kind });
   };
   return (
@@ -78,7 +85,7 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
           <Field
             label="Path of the line"
             value={path}
-            onChange={(next) => serial({ path: next })}
+            onChange={(text) => typePath(text)}
             mono
             placeholder="/dev/serial/by-id/…"
             hint="As the server sees it. A name under /dev/serial/by-id stays the same whatever is plugged in; one like /dev/ttyUSB0 does not."
@@ -88,7 +95,7 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
           <Field
             label="Speed"
             value={baud}
-            onChange={(next) => serial({ baud: next })}
+            onChange={typeBaud}
             type="number"
             unit="baud"
             error={wrong['baudRate']}

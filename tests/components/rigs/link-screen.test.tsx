@@ -1,6 +1,7 @@
 import { fireEvent, screen, waitFor } from '@testing-library/react';
 import { useSession } from '@/components/api';
 import { LinkScreen } from '@/components/rigs/link-screen';
+import type { LinkSettings } from '@/shared/contracts/rigs';
 import type { Role } from '@/shared/contracts/roles';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { params, went } from '../support/fake-router';
@@ -44,9 +45,9 @@ function Page() {
 
 beforeEach(() => startFakeStream());
 
-async function open(role: Role): Promise<FakeLab> {
+async function open(role: Role, link: LinkSettings = { kind: 'simulated' }): Promise<FakeLab> {
   const lab = startFakeLab(role);
-  lab.on('GET /labs/lab-1/rigs/rig-1', () => ({ body: rig, etag: '"1"' }));
+  lab.on('GET /labs/lab-1/rigs/rig-1', () => ({ body: { ...rig, link }, etag: '"1"' }));
   params['rigId'] = 'rig-1';
   went.length = 0;
   await showInLab(<Page />);
@@ -75,6 +76,20 @@ test('the chosen line is stored and leads back to the rig', async () => {
   await screen.findByText(/is now reached over Simulated controller/);
   expect(lab.requests('PUT /labs/lab-1/rigs/rig-1/link')[0]?.body).toEqual({ kind: 'simulated' });
   expect(went).toEqual(['/rigs/rig-1']);
+});
+
+test('another speed leaves the levels of the control lines and the device as they were; another path is another device', async () => {
+  const usb = { vendorId: '2341', productId: '0043', serialNumber: '5573132' };
+  const link: LinkSettings = { kind: 'serial', path: '/dev/ttyUSB0', baudRate: 115_200, dtr: false, rts: true, usb };
+  const lab = await open('keeper', link);
+  lab.on('PUT /labs/lab-1/rigs/rig-1/link', () => ({ body: rig }));
+  const saved = () => lab.requests('PUT /labs/lab-1/rigs/rig-1/link').at(-1)?.body;
+  fireEvent.change(screen.getByTestId('link-baud'), { target: { value: '57600' } });
+  fireEvent.click(screen.getByTestId('save-link'));
+  await waitFor(() => expect(saved()).toEqual({ ...link, baudRate: 57_600 }));
+  fireEvent.change(screen.getByTestId('link-path'), { target: { value: '/dev/ttyUSB1' } });
+  fireEvent.click(screen.getByTestId('save-link'));
+  await waitFor(() => expect(saved()).toEqual({ kind: 'serial', path: '/dev/ttyUSB1', baudRate: 57_600, dtr: false, rts: true }));
 });
 
 test('a line that this version does not open is refused in words at the page', async () => {
