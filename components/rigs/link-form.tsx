@@ -92,15 +92,7 @@ export function LinkForm({ link, onChange, errors }: LinkFormProps) {
             error={path.trim() === '' ? undefined : wrong['path']}
             testID="link-path"
           />
-          <Field
-            label="Speed"
-            value={baud}
-            onChange={typeBaud}
-            type="number"
-            unit="baud"
-            error={wrong['baudRate']}
-            testID="link-baud"
-          />
+          <Field label="Speed" value={baud} onChange={typeBaud} type="number" unit="baud" error={wrong['baudRate']} testID="link-baud" />
         </>
       )}
     </View>
