@@ -62,6 +62,16 @@ async function problemOf(response: Response): Promise<ApiProblem> {
   });
 }
 
+const notUnderstood = (status: number) =>
+  new ApiProblem({
+    type: '/problems/internal',
+    title: 'Unexpected answer',
+    status,
+    code: 'internal',
+    detail:
+      'The answer was not understood. Reload the page: the server may be newer than it. If a page of the network came in place of the server, sign in to the network first.',
+  });
+
 type RefusedListener = () => void;
 const refusedListeners = new Set<RefusedListener>();
 
@@ -108,18 +118,14 @@ export async function call<R extends RouteContract>(route: R, input: CallInput<R
     throw problem;
   }
   const etag = response.headers.get('etag');
-  if (route.response === undefined) return { data: undefined as ResponseOf<R>, etag };
+  if (route.response === undefined) {
+    // The sign-in page of a network answers everything with 200: without a body to read, only the status tells.
+    if (response.status !== route.status) throw notUnderstood(response.status);
+    return { data: undefined as ResponseOf<R>, etag };
+  }
   const body: unknown = await response.json().catch(() => undefined);
   learnTime(body, sentMs);
   const parsed = route.response.safeParse(body);
-  if (!parsed.success) {
-    throw new ApiProblem({
-      type: '/problems/internal',
-      title: 'Unexpected answer',
-      status: response.status,
-      code: 'internal',
-      detail: 'The answer of the server was not understood. Reload the page to get its present version.',
-    });
-  }
+  if (!parsed.success) throw notUnderstood(response.status);
   return { data: parsed.data as ResponseOf<R>, etag };
 }

@@ -1,5 +1,6 @@
 import { useLabCall } from '@/components/api';
-import { useSafeActs, type SafePost } from '@/components/runs/use-intervention';
+import type { SafePost } from '@/components/runs/safe-acts';
+import { useSafeActs } from '@/components/runs/use-intervention';
 import { holdRig, stopRig } from '@/shared/contracts/link';
 
 /** Hold and stop of whatever moves on a rig: one tap, sent until answered, acted on at most once. */

@@ -9,7 +9,7 @@ export type LocalIntervention =
   | { kind: 'sending'; act: SafeAct; tappedAtMs: number; attempts: number; unreachable: boolean }
   | { kind: 'accepted'; act: SafeAct; serverAtMs: number }
   | { kind: 'refused'; act: SafeAct; detail: string }
-  | { kind: 'unanswered'; act: SafeAct; attempts: number };
+  | { kind: 'unanswered'; act: SafeAct; tappedAtMs: number; attempts: number };
 
 export type InterventionAction =
   | { kind: 'tapped'; act: SafeAct; atMs: number }
@@ -32,7 +32,7 @@ export function interventionReducer(state: LocalIntervention, action: Interventi
     case 'refused':
       return { kind: 'refused', act: state.act, detail: action.detail };
     case 'gave-up':
-      return { kind: 'unanswered', act: state.act, attempts: state.attempts };
+      return { kind: 'unanswered', act: state.act, tappedAtMs: state.tappedAtMs, attempts: state.attempts };
   }
 }
 
@@ -125,7 +125,7 @@ function isFresh(known: Known, state: RunState): boolean {
 function isAnswerTo(local: Exclude<LocalIntervention, { kind: 'idle' }>, known: Known): boolean {
   const serverAtMs = Date.parse(known.serverAt);
   if (local.kind === 'accepted') return serverAtMs >= local.serverAtMs - 1;
-  if (local.kind === 'sending') return serverAtMs >= local.tappedAtMs - 2000;
+  if (local.kind === 'sending' || local.kind === 'unanswered') return serverAtMs >= local.tappedAtMs - 2000;
   return false;
 }
 

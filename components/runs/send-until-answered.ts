@@ -1,3 +1,5 @@
+import { deviceNowMs } from '@/components/api/device-clock';
+
 /** When a hold or stop is sent again until it is answered, ms after the tap: quickly at first, then ever more seldom. */
 const attemptAtMs: readonly number[] = [0, 300, 800, 1800, 3800, 7800, 15_800, 29_000];
 const giveUpAfterMs = 30_000;
@@ -15,8 +17,8 @@ export interface SendingOptions<T> {
 export interface Sending<T> {
   /** The first answer, or null when there was none in 30 s. Never rejects. */
   answer: Promise<T | null>;
-  /** One more attempt at once, for a second tap. */
-  again: () => void;
+  /** One more attempt at once, for a second tap; false where this sending is over. */
+  again: () => boolean;
   cancel: () => void;
 }
 
@@ -39,13 +41,17 @@ export function sendUntilAnswered<T>({ send, onAttempt, onNoAnswer }: SendingOpt
     abort.abort();
     settle(value);
   };
+  const beganMs = deviceNowMs();
   const attempt = () => {
-    if (over) return;
+    // A page that was frozen meanwhile wakes with all its timers due: nothing is sent later than it counts.
+    if (deviceNowMs() - beganMs >= giveUpAfterMs) end(null);
+    if (over) return false;
     onAttempt();
     send(abort.signal).then(
       (outcome) => (outcome.kind === 'answer' ? end(outcome.value) : over ? undefined : onNoAnswer()),
       () => (over ? undefined : onNoAnswer()),
     );
+    return true;
   };
   for (const atMs of attemptAtMs) timers.push(setTimeout(attempt, atMs));
   timers.push(setTimeout(() => end(null), giveUpAfterMs));

@@ -1,63 +1,13 @@
 import { useCallback, useEffect, useReducer, useRef } from 'react';
-import { addressOf, call, deviceNowMs, hearServerTime, isProblem, useLab } from '@/components/api';
-import { reportReached } from '@/components/api/connection';
-import { getRun, listSteps, liveMessageSchemas, liveRun, type LiveMessages } from '@/shared/contracts/runs';
+import { addressOf, call, deviceNowMs, isProblem, useLab } from '@/components/api';
+import { getRun, listSteps, liveRun } from '@/shared/contracts/runs';
 import { isOver } from './run-words';
+import { openLiveStream } from './live-stream';
 import { liveReducer, noLive, type LiveMessage, type LiveState } from './live-reducer';
 
 const flushMs = 200;
-const reopenMs = 2000;
 const silentMs = 5000;
 const pollMs = 2000;
-const types = Object.keys(liveMessageSchemas) as (keyof LiveMessages)[];
-
-/** A message as it came over the line, or null when it is not one of ours (a newer server may send more kinds). */
-export function readMessage(type: keyof LiveMessages, text: string, receivedAtMs: number): LiveMessage | null {
-  try {
-    const parsed = liveMessageSchemas[type].safeParse(JSON.parse(text));
-    return parsed.success ? ({ type, data: parsed.data, receivedAtMs } as LiveMessage) : null;
-  } catch {
-    return null;
-  }
-}
-
-interface Handlers {
-  onMessage: (message: LiveMessage) => void;
-  onOpen: () => void;
-  onBroken: () => void;
-}
-
-/** Opens the stream and keeps it open. The browser itself reconnects with Last-Event-ID; one that it gave up is opened anew. */
-function openStream(address: string, { onMessage, onOpen, onBroken }: Handlers): () => void {
-  let source: EventSource | null = null;
-  let timer: ReturnType<typeof setTimeout> | undefined;
-  const open = () => {
-    const stream = new EventSource(address);
-    source = stream;
-    stream.onopen = () => {
-      reportReached(true);
-      onOpen();
-    };
-    stream.onerror = () => {
-      onBroken();
-      if (stream.readyState !== 2) return;
-      stream.close();
-      timer = setTimeout(open, reopenMs);
-    };
-    for (const type of types) {
-      stream.addEventListener(type, (event) => {
-        const message = readMessage(type, (event as MessageEvent<string>).data, deviceNowMs());
-        if (message?.type === 'beat') hearServerTime(Date.parse(message.data.serverAt));
-        if (message !== null) onMessage(message);
-      });
-    }
-  };
-  open();
-  return () => {
-    clearTimeout(timer);
-    source?.close();
-  };
-}
 
 export interface LiveRun {
   state: LiveState;
@@ -107,7 +57,7 @@ export function useLiveRun(runId: string): LiveRun {
       waiting.current = [];
     };
     const timer = setInterval(flush, flushMs);
-    const close = openStream(addressOf(liveRun, { params: { labId, runId } }), {
+    const close = openLiveStream(addressOf(liveRun, { params: { labId, runId } }), {
       onMessage: (message) => waiting.current.push(message),
       onOpen: () => dispatch({ kind: 'opened' }),
       onBroken: () => dispatch({ kind: 'broken' }),

@@ -27,6 +27,15 @@ const act = defineRoute({
   response: z.strictObject({ ok: z.boolean() }),
   problems: [],
 });
+const remove = defineRoute({
+  name: 'remove',
+  summary: '',
+  method: 'DELETE',
+  path: '/labs/:labId',
+  access: 'run.start',
+  status: 204,
+  problems: [],
+});
 const params = { labId: 'lab 1', thingId: 'a/b' };
 
 const answers = (status: number, body: unknown, headers: Record<string, string> = {}) =>
@@ -109,6 +118,14 @@ test('an answer that is no problem document is still a sentence', async () => {
 test('an answer of another version asks for a reload instead of showing half', async () => {
   respond(answers(200, { name: 1 }));
   await expect(call(read, { params })).rejects.toMatchObject({ detail: expect.stringContaining('Reload') });
+});
+
+test('the sign-in page of a network is not taken for an answer, not even where none has a body', async () => {
+  respond(answers(200, '<html>'));
+  for (const asked of [call(remove, { params }), call(read, { params }), call(act, { params, body: { n: 1 } })])
+    await expect(asked).rejects.toMatchObject({ detail: expect.stringContaining('sign in to the network') });
+  respond(answers(204, undefined));
+  await expect(call(remove, { params })).resolves.toMatchObject({ data: undefined });
 });
 
 test('a server that does not answer is unreachable until it answers again, and nothing is sent twice', async () => {

@@ -1,7 +1,7 @@
 import type { ChainedEvent } from '@/shared/archive/run-records';
 import { linkAge } from '@/components/runs/link-age';
 import { liveReducer, mergeRows, noLive, serverOffsetMs, type LiveMessage, type LiveState } from '@/components/runs/live-reducer';
-import { readMessage } from '@/components/runs/use-live-run';
+import { readMessage } from '@/components/runs/live-stream';
 import { beatAt, nowUtcMs, rowsAt, viewAt } from '../fixtures/run';
 
 const receive = (state: LiveState, ...messages: LiveMessage[]) => liveReducer(state, { kind: 'messages', messages });

@@ -71,6 +71,20 @@ test('stays enabled without a network, and a tap after giving up is a new act wi
   expect(sent.at(-1)?.key).not.toBe(sent[0]?.key);
 });
 
+test('a page that sleeps between tap and answer sends nothing later than 30 s after the tap, and says that there was no answer', async () => {
+  await tapStop();
+  // Whoever sleeps sees time leap, and all timers come due at once.
+  jest.setSystemTime(begin + 40_000);
+  await after(1000);
+  await after(1000);
+  expect(sent.map(({ atMs }) => atMs)).toEqual([0]);
+  expect(stages()).toContain('No answer in 30 s');
+  fireEvent.click(stop());
+  await after(0);
+  expect(sent).toHaveLength(2);
+  expect(sent[1]?.key).not.toBe(sent[0]?.key);
+});
+
 test('a second tap while sending tries at once with the same key', async () => {
   await tapStop();
   await after(1000);

@@ -69,8 +69,8 @@ export function startFakeLab(role: Role): FakeLab {
     };
     asked.push(request);
     const {
-      status = 200,
       body,
+      status = body === undefined ? 204 : 200,
       etag,
     } = handlers.get(`${request.method} ${path}`)?.(request) ?? problem(404, 'not-found', `Nothing at ${path}.`);
     return {
