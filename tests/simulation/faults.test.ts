@@ -1,3 +1,5 @@
+import { readFileSync } from 'node:fs';
+import { join } from 'node:path';
 import * as fc from 'fast-check';
 import { verifyChain } from '@/shared/archive/chain';
 import type { InterruptionPolicy, Step } from '@/shared/protocol/document';
@@ -5,20 +7,20 @@ import { sha256Hex } from '@/server/evaluation/sha256';
 import type { Rehearsal } from '@/server/engine/rehearsal/rehearse';
 import { runThrough, shortProtocol, startUtcMs } from './rehearsing';
 
-/** The table of faults of the protocol format: what a run comes to, at whatever second the fault comes. */
-const table = {
-  'link-drop': { hold: 'held', resume: 'finished', stop: 'stopped' },
-  garbage: { hold: 'finished', resume: 'finished', stop: 'finished' },
-  'server-kill': { hold: 'held', resume: 'finished', stop: 'stopped' },
-  'controller-reset': { hold: 'held', resume: 'held', stop: 'stopped' },
-  'interlock-open': { hold: 'held', resume: 'held', stop: 'stopped' },
-  'sensor-gap': { hold: 'finished', resume: 'finished', stop: 'finished' },
-  burst: { hold: 'finished', resume: 'finished', stop: 'finished' },
-} as const;
-type Fault = keyof typeof table;
-
-const faults = Object.keys(table) as Fault[];
 const policies: InterruptionPolicy[] = ['hold', 'resume', 'stop'];
+const faults = ['link-drop', 'garbage', 'server-kill', 'controller-reset', 'interlock-open', 'sensor-gap', 'burst'] as const;
+type Fault = (typeof faults)[number];
+
+/** The table that users read: what a run comes to, at whatever second the fault comes. */
+const rows = readFileSync(join(__dirname, '../../docs/faults.md'), 'utf8').matchAll(/^\| `([\w-]+)` \|.*\| (\w+) \| (\w+) \| (\w+) \|$/gm);
+const table = Object.fromEntries([...rows].map(([, fault, hold, resume, stop]) => [fault, { hold, resume, stop }])) as Record<
+  Fault,
+  Record<InterruptionPolicy, string>
+>;
+
+test('the table names every fault', () => {
+  expect(Object.keys(table)).toEqual(faults);
+});
 
 function assertWholeLog({ steps, events }: Rehearsal): void {
   expect(steps.map(({ seq }) => seq)).toEqual(steps.map((_, index) => index + 1));
@@ -131,7 +133,7 @@ test('any fault at any second, also two of them, comes to an end that the table 
       async (onInterruption, raised) => {
         const result = await runThrough({ ...shortProtocol, onInterruption }, { faults: raised, rateHz: 0.1 });
         assertWholeLog(result);
-        const allowed = raised.map(({ kind }) => table[kind][onInterruption] as string);
+        const allowed = raised.map(({ kind }) => table[kind][onInterruption]);
         if (raised.length === 1) expect({ outcome: result.outcome }).toEqual({ outcome: allowed[0] });
         else expect([...allowed, 'held', 'finished']).toContain(result.outcome);
       },
