@@ -7,13 +7,14 @@ import { endOfArm, knownAfter } from '../engine/end-of-arm';
 import { GuidedMoves } from '../engine/guided-moves';
 import { MotorSoak } from '../engine/motor-soak';
 import type { NoticeTopic } from '../engine/run-context';
-import { RigSupervisor, type SupervisorParts } from '../engine/rig-supervisor';
+import { type QuarantinedRun, RigSupervisor, type SupervisorParts } from '../engine/rig-supervisor';
 import { DATABASE_GRACE_MS } from '../engine/run-saver';
 import { sha256Hex } from '../evaluation/sha256';
 import type { RigStation } from '../interfaces/rig-stations';
 import type { SampleReader } from '../interfaces/sample-reader';
 import type { SampleStore } from '../interfaces/sample-store';
 import type { LinkEvent } from '../interfaces/turntable-link';
+import { isPassing } from '../store/failures';
 import { createRunStore } from '../store/run-store';
 import type { MemoryArmKeeper } from './arm-keeper';
 import type { Background } from './background';
@@ -40,6 +41,8 @@ export interface RigSideWiring {
   onTaken(rig: RigKey): void;
   /** The database does not answer since then; null: it does again. */
   onDatabase(sinceUtcMs: number | null): void;
+  /** A run cannot be taken up by this server. */
+  onQuarantine(run: QuarantinedRun): void;
   /** What a run has to say to whoever started it. */
   onNotice(start: RunStart, notice: { topic: NoticeTopic; text: string }): void;
   /** What a line told, and whether the rig was armed just before. */
@@ -99,6 +102,8 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     guidedBy: (rigId) => guided.takenBy(rigId),
     samplesOf,
     perform: performing(arms, wiring),
+    ...{ isPassing, onQuarantine: wiring.onQuarantine },
+    onError: (error, { runId, rigId }) => log.error({ err: error, runId, rigId }, 'a run went wrong'),
   });
 
   const guided = buildGuided({ clock, linkOf, arms, locks, onLine, supervisor });

@@ -77,8 +77,9 @@ class Life {
     await services.post?.open();
     await keepHouse(db, services.clock.utcMs());
     if (roles.includes('rig')) {
-      await inside.takeRigs(await allRigs(db));
+      // From the first lease on: to take many rigs up may last longer than a lease.
       inside.leases.renewRegularly();
+      await inside.takeRigs(await allRigs(db));
       this.refreshRegularly();
     }
     inside.tellTakenUp();

@@ -75,6 +75,10 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     onLine: (rigId) => (lines.changed(rigId), told.rigChanged(rigId)),
     onTaken: (rig) => background.add(taking.takenOver(rig), 'taking a rig over'),
     onDatabase: (sinceUtcMs) => watch.noteDatabase((awaySinceUtcMs = sinceUtcMs)),
+    onQuarantine: ({ start: { runId, rigId }, why }) => {
+      services.activeRuns.remove(runId);
+      log.error({ runId, rigId }, why);
+    },
     onNotice: (start, notice) => tellStarter(services, start, notice),
     onLinkEvent: (station, event, wasArmed) => watch.heard(station, event, wasArmed),
   });

@@ -2,6 +2,7 @@ import type { Services } from '../http/services';
 import type { StationRig } from '../interfaces/rig-stations';
 import { recallSamples } from '../ingest/recall-samples';
 import type { RecentSamples } from '../ingest/recent-samples';
+import { isPassing } from '../store/failures';
 import { findRig } from '../store/rigs';
 import { unfinishedRuns } from '../store/runs-read';
 import type { RigSide } from './build-rigs';
@@ -41,12 +42,7 @@ export class RigTaking {
 
   private async take(rigs: readonly StationRig[]): Promise<void> {
     const { services, side } = this;
-    for (const rig of rigs) {
-      if ((await side.leases.epochOf({ labId: rig.labId, rigId: rig.id })) === null) continue;
-      await side.arms.load({ labId: rig.labId, rigId: rig.id });
-      await side.locks.load({ labId: rig.labId, rigId: rig.id });
-      await side.stations.put(rig);
-    }
+    for (const rig of rigs) await this.open(rig);
     const ids = new Set(rigs.map(({ id }) => id));
     const isOurs = (rigId: string) => ids.has(rigId) && side.leases.holds(rigId);
     for (const run of await unfinishedRuns(services.database.db)) {
@@ -56,10 +52,21 @@ export class RigTaking {
       await recallSamples({ ...services, recent: side.recent }, { labId: run.labId, rigId: run.rigId, nowUtcMs: services.clock.utcMs() });
     }
     await services.access.refresh(services.watchedLabs());
-    const { quarantined } = await services.supervisor.recover(isOurs);
-    for (const { start, why } of quarantined) {
-      services.activeRuns.remove(start.runId);
-      services.log.error({ runId: start.runId, rigId: start.rigId }, why);
+    await services.supervisor.recover(isOurs);
+  }
+
+  /** A rig whose line cannot be opened keeps none of the others waiting; a run of it is blocked, with that reason. */
+  private async open(rig: StationRig): Promise<void> {
+    const { leases, arms, locks, stations } = this.side;
+    const key = { labId: rig.labId, rigId: rig.id };
+    try {
+      if ((await leases.epochOf(key)) === null) return;
+      await arms.load(key);
+      await locks.load(key);
+      await stations.put(rig);
+    } catch (error) {
+      if (isPassing(error)) throw error;
+      this.services.log.error({ err: error, rigId: rig.id }, 'the line of the rig could not be opened');
     }
   }
 

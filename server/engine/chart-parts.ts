@@ -275,6 +275,9 @@ export function isOver({ context, event }: Told): boolean {
   return step !== null && (ahead === null || ahead.cancelled) && event.at.utcMs >= standingEndUtcMs(step);
 }
 
+/** A hold after this step, of which the controller has not said that it cancelled the move that waited there: that may begin now. */
+export const mayMoveAgainst = ({ context: { run } }: Told): boolean => run.holdAfterStep !== null && run.ahead !== null;
+
 export function isOverdue({ context, event }: Told): boolean {
   const { ahead, deadlineUtcMs } = context.run;
   return ahead !== null && !ahead.cancelled && deadlineUtcMs !== null && event.at.utcMs >= deadlineUtcMs;

@@ -41,7 +41,7 @@ import { noteReady, noteReset, noteStandstill, noteStrangeMotion } from './obser
 import { type Advance, CHART_VERSION, type ChartState, type RunContext, type RunEvent, type RunSnapshot } from './run-context';
 import { askAgain, dropAhead, expectEnd, finishMotion, noteBegan, noteEnded, takeAhead } from './motions';
 import { slipFoundHoming } from './position';
-import { chooseNext, endStanding, lookBeforeEnd, lookIsDue, sendAhead } from './steps';
+import { chooseNext, endStanding, explainHoldAfterStep, lookBeforeEnd, lookIsDue, sendAhead } from './steps';
 import {
   act,
   bootedAnew,
@@ -59,6 +59,7 @@ import {
   isMine,
   isOver,
   isOverdue,
+  mayMoveAgainst,
   motionEnds,
   pick,
   refusals,
@@ -163,6 +164,7 @@ const machine = chart.createMachine({
         looked: { actions: act(noteDwellLook) },
         deadline: [
           { guard: isOverdue, ...holdsFor('no-answer', 'The controller accepted the move and never told that it began.') },
+          { guard: (told) => isOver(told) && mayMoveAgainst(told), target: 'holding', actions: act(explainHoldAfterStep, beginHold) },
           { guard: isOver, target: 'choosing', actions: act(endStanding, chooseNext) },
           { guard: when(lookIsDue), actions: act(lookBeforeEnd) },
           { actions: act(sendAhead) },

@@ -4,12 +4,12 @@ import type { Finding } from '@/shared/protocol/finding';
 import { planTimeline } from '@/shared/protocol/timeline';
 import type { Clock } from '../interfaces/clock';
 import type { RunJournals } from '../interfaces/run-journal';
-import { type RunStore, StaleRunError, type StoredRun } from '../interfaces/run-store';
+import type { RunStore, StoredRun } from '../interfaces/run-store';
 import type { SampleReader } from '../interfaces/sample-reader';
 import type { TurntableLink } from '../interfaces/turntable-link';
 import { isRunOver } from './chart';
 import { checkAtStart } from './check-at-start';
-import { mergeWrites, withAllToPerform } from './merge-journal';
+import { keptRun } from './kept-run';
 import { type Arm, CHART_VERSION } from './run-context';
 import { RunDriver } from './run-driver';
 import type { RunChange } from './run-driver-parts';
@@ -35,6 +35,10 @@ export interface SupervisorParts {
   samplesOf?(rigId: string): SampleReader;
   /** Notifications and the end of the arm. */
   perform(effect: OwnEffect, start: RunStart): void;
+  /** Whether an error only says that the database does not answer just now: what it was asked may be asked again. */
+  isPassing(error: unknown): boolean;
+  /** A run cannot be taken up; its rig stays blocked until somebody decides. */
+  onQuarantine?(run: QuarantinedRun): void;
   /** An error that is nobody's answer, to be logged. */
   onError?(error: unknown, start: RunStart): void;
 }
@@ -63,8 +67,13 @@ const hasEnded = ({ snapshot, chartVersion }: StoredRun) => {
   return found !== null && isRunOver(found);
 };
 
-/** A run that nobody drove for longer is not resumed by itself, ms. */
-const MERGE_PATIENCE_MS = 600_000;
+/** What lies at the bottom of an error, as a sentence. */
+function innermost(error: unknown): string {
+  if (error instanceof Error && error.cause instanceof Error) return innermost(error.cause);
+  const message = error instanceof Error ? error.message : String(error);
+  return message.endsWith('.') ? message : `${message}.`;
+}
+
 const LONGEST_PAUSE_MS = 5_000;
 
 export type SupervisorListener = (driver: RunDriver, change: RunChange) => void;
@@ -73,6 +82,8 @@ export type SupervisorListener = (driver: RunDriver, change: RunChange) => void;
 export class RigSupervisor {
   private readonly byRig = new Map<string, RunDriver>();
   private readonly quarantine = new Map<string, QuarantinedRun>();
+  /** Found unfinished, and neither driven nor quarantined yet. */
+  private readonly undecided = new Map<string, StoredRun>();
   private readonly listeners = new Set<SupervisorListener>();
   private closed = false;
 
@@ -80,24 +91,16 @@ export class RigSupervisor {
 
   /**
    * Takes up the unfinished runs of the rigs that this process drives, with what an earlier one kept of them in its journal: each is
-   * resumed, held or stopped as its protocol says. Call it when their links are being opened.
+   * resumed, held or stopped as its protocol says. Call it when their links are being opened. Resolves when each was tried once; one for
+   * which the database did not answer is tried again by itself, and keeps none of the others waiting.
    */
-  async recover(isOurs: (rigId: string) => boolean = () => true): Promise<{ taken: RunDriver[]; quarantined: QuarantinedRun[] }> {
-    const taken: RunDriver[] = [];
-    const quarantined: QuarantinedRun[] = [];
+  async recover(isOurs: (rigId: string) => boolean = () => true): Promise<void> {
     for (const found of await this.parts.store.unfinished()) {
-      const { start } = found;
-      if (!isOurs(start.rigId) || this.byRig.has(start.rigId)) continue;
-      const { stored, why: unread } = await this.withJournal(found);
-      if (this.closed) break;
-      const why = unread ?? this.unfitness(stored);
-      if (why !== null) quarantined.push({ start, why });
-      else if (!hasEnded(stored)) taken.push(this.drive(start, stored, this.parts.linkOf(start.rigId) as TurntableLink));
+      const { rigId } = found.start;
+      if (this.closed || !isOurs(rigId) || this.byRig.has(rigId) || this.undecided.has(rigId)) continue;
+      this.undecided.set(rigId, found);
+      await this.takeUp(found);
     }
-    if (this.closed) return { taken: [], quarantined: [] };
-    for (const run of quarantined) this.quarantine.set(run.start.rigId, run);
-    for (const driver of taken) driver.recover();
-    return { taken, quarantined };
   }
 
   /**
@@ -140,6 +143,8 @@ export class RigSupervisor {
     const active = this.byRig.get(rigId);
     if (active !== undefined && !active.isOver())
       return `The rig is taken by another run (${active.facts().state}). Wait for its end, or stop it.`;
+    if (this.undecided.has(rigId))
+      return 'The rig is taken by an unfinished run, which this server takes up as soon as the database answers. Wait a little.';
     const quarantined = this.quarantine.get(rigId);
     return quarantined === undefined ? null : `The rig is blocked by an unfinished run. ${quarantined.why}`;
   }
@@ -197,6 +202,7 @@ export class RigSupervisor {
   letGo(rigId: string): void {
     this.byRig.get(rigId)?.close();
     this.byRig.delete(rigId);
+    this.undecided.delete(rigId);
     this.quarantine.delete(rigId);
   }
 
@@ -205,38 +211,37 @@ export class RigSupervisor {
     this.closed = true;
     for (const driver of this.byRig.values()) driver.close();
     this.byRig.clear();
+    this.undecided.clear();
   }
 
-  /** The run with what a process that is gone could not bring into the database; `why` where that cannot be read. */
-  private async withJournal(stored: StoredRun): Promise<{ stored: StoredRun; why: string | null }> {
-    const { store, journals, onError } = this.parts;
-    const { start } = stored;
-    const journal = journals.of(start);
+  /** Drives the run or puts it into quarantine; by and by, where the database does not answer now. */
+  private async takeUp(found: StoredRun, turn = 0): Promise<void> {
+    const { store, journals, clock, isPassing, onError } = this.parts;
+    const { start } = found;
+    const isUndecided = () => this.undecided.get(start.rigId) === found;
+    if (!isUndecided()) return;
     try {
-      const writes = await journal.read();
-      if (writes.length === 0) return { stored, why: null };
-      await this.patiently(() => mergeWrites(store, withAllToPerform(writes)));
-      await journal.clear();
+      const stored = await keptRun(found, { store, journal: journals.of(start), onAside: (error) => onError?.(error, start) });
+      if (isUndecided()) this.decide(start, stored);
     } catch (error) {
-      if (!(error instanceof StaleRunError)) return { stored, why: error instanceof Error ? error.message : String(error) };
-      const aside = await journal.setAside();
-      onError?.(new Error(`${error.message}; what this server had kept of it meanwhile lies in ${aside}`), start);
+      if (!isUndecided()) return;
+      if (isPassing(error)) return void clock.after(Math.min(100 * 2 ** turn, LONGEST_PAUSE_MS), () => void this.takeUp(found, turn + 1));
+      onError?.(error, start);
+      this.putAside({ start, why: `The run could not be taken up: ${innermost(error)} Look at the rig, then end the run.` });
     }
-    return { stored: (await this.patiently(() => store.load(start.labId, start.runId))) ?? stored, why: null };
   }
 
-  /** A database that goes away again at this very moment blocks no rig: nothing moves, and what it did not answer is tried again. */
-  private async patiently<T>(work: () => Promise<T>): Promise<T> {
-    const { clock } = this.parts;
-    const sinceMs = clock.monotonicMs();
-    for (let turn = 0; ; turn += 1) {
-      try {
-        return await work();
-      } catch (error) {
-        if (error instanceof StaleRunError || this.closed || clock.monotonicMs() - sinceMs > MERGE_PATIENCE_MS) throw error;
-        await new Promise<void>((resolve) => void clock.after(Math.min(100 * 2 ** turn, LONGEST_PAUSE_MS), resolve));
-      }
-    }
+  private decide(start: RunStart, stored: StoredRun): void {
+    const why = this.unfitness(stored);
+    if (why !== null) return this.putAside({ start, why });
+    if (!hasEnded(stored)) this.drive(start, stored, this.parts.linkOf(start.rigId) as TurntableLink).recover();
+    this.undecided.delete(start.rigId);
+  }
+
+  private putAside(run: QuarantinedRun): void {
+    this.undecided.delete(run.start.rigId);
+    this.quarantine.set(run.start.rigId, run);
+    this.parts.onQuarantine?.(run);
   }
 
   private unfitness({ start, chartVersion, snapshot }: StoredRun): string | null {

@@ -136,9 +136,9 @@ export class RunSaver {
     return { over, cancel: () => timers.forEach((cancel) => cancel()) };
   }
 
-  /** The journal takes the write over. False when it does not. */
+  /** The journal takes the write over. False when it does not, or when the run is no longer this process's. */
   private async handOver(attempt: Attempt): Promise<boolean> {
-    if (!(await this.keep(attempt.write))) return false;
+    if (this.closed || !(await this.keep(attempt.write))) return false;
     attempt.leftToJournal = true;
     attempt.stored.catch(() => undefined);
     this.merging = true;

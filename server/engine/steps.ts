@@ -89,7 +89,7 @@ function nextItem(
 function holdIsDue(draft: Draft): boolean {
   const { holdAfterStep, moment } = draft.context;
   if (holdAfterStep !== null) {
-    draft.because('hold-after-dwell', `${holdAfterStep} asked to hold when the step had ended.`);
+    explainHoldAfterStep(draft);
     return true;
   }
   const asked = holdOfDwells(draft);
@@ -102,6 +102,9 @@ function holdIsDue(draft: Draft): boolean {
   draft.because('arm-ended', `The arm of ${draft.context.arm?.name ?? 'the rig'} has ended. Arm the rig again on site, then resume.`);
   return true;
 }
+
+export const explainHoldAfterStep = (draft: Draft): void =>
+  void draft.because('hold-after-dwell', `${draft.context.holdAfterStep ?? 'Somebody'} asked to hold when the step had ended.`);
 
 function armHasEnded(draft: Draft, atUtcMs: number): boolean {
   const { arm } = draft.context;

@@ -4,7 +4,7 @@ import { may, roles, type Act } from '@/shared/contracts/roles';
 import type { IdempotencyAnswer, IdempotencyPort } from '../interfaces/idempotency';
 import { checkedResponse } from './check-response';
 import { parsedBy } from './desk/here-desk';
-import { isDatabaseAway } from './errors';
+import { isDatabaseAway } from '../store/failures';
 import { actOnce, fingerprintOf, idempotencyKeyOf, rethrowKeptProblem } from './idempotent';
 import { linkToNext } from './paging';
 import { notFound, ProblemError } from './problem-error';

@@ -1,5 +1,6 @@
 import * as z from 'zod';
 import { NotYetError } from '@/shared/lib/not-yet-error';
+import { isDatabaseAway, isGivenUp } from '../store/failures';
 import { ProblemError, type ProblemItem } from './problem-error';
 
 const pathOf = (path: readonly PropertyKey[]) => path.map(String).join('.');
@@ -39,43 +40,14 @@ const bodyErrors: Record<string, () => ProblemError> = {
   'charset.unsupported': () => new ProblemError('wrong-content-type', 'The body must be UTF-8.'),
 };
 
-/** Codes by which Node and PostgreSQL (classes 08, 53 and 57P) say that the database cannot be reached or is going away. */
-const awayCode = /^(ECONN\w+|EPIPE|ETIMEDOUT|ENOTFOUND|EAI_AGAIN|ENOENT|08\w{3}|53\w{3}|57P\d\d)$/;
-const awayText =
-  /Connection terminated|timeout exceeded when trying to connect|Client has encountered a connection error|Cannot use a pool after calling end/;
-
-/** PostgreSQL gave a statement up: it took longer than its time limit (57014), or waited too long for a lock (55P03). */
-const givenUpCode = /^(57014|55P03)$/;
-
 interface ErrorLike {
-  code?: unknown;
   type?: unknown;
   status?: unknown;
-  message?: unknown;
-  cause?: unknown;
-  errors?: unknown;
-  syscall?: unknown;
 }
 const isErrorLike = (value: unknown): value is ErrorLike => typeof value === 'object' && value !== null;
 
-/** Whether a failure, or one inside the wrappers of drivers and mappers, is of a kind. */
-function isSomewhere(error: unknown, ofKind: (error: ErrorLike) => boolean): boolean {
-  if (!isErrorLike(error)) return false;
-  if (ofKind(error) || isSomewhere(error.cause, ofKind)) return true;
-  return Array.isArray(error.errors) && error.errors.some((inner) => isSomewhere(inner, ofKind));
-}
-
-const hasCode = (error: ErrorLike, codes: RegExp) => typeof error.code === 'string' && codes.test(error.code);
-const saysAway = (error: ErrorLike) =>
-  (hasCode(error, awayCode) && !isFileError(error)) || (typeof error.message === 'string' && awayText.test(error.message));
-
 /** A few seconds. */
 const awayRetryS = 5;
-
-const isFileError = (error: ErrorLike) => error.code === 'ENOENT' && error.syscall !== 'connect';
-
-/** Whether a failure says that the database cannot be reached, or is going away. */
-export const isDatabaseAway = (error: unknown): boolean => isSomewhere(error, saysAway);
 
 const awaySince = (utcMs: number | null) => (utcMs === null ? 'at the moment' : `since ${new Date(utcMs).toISOString().slice(11, 19)} UTC`);
 
@@ -94,12 +66,12 @@ export function problemErrorOf(error: unknown, databaseAwaySinceUtcMs: number | 
   if (isErrorLike(error)) {
     const known = typeof error.type === 'string' ? bodyErrors[error.type] : undefined;
     if (known !== undefined) return known();
-    if (isSomewhere(error, (inner) => hasCode(inner, givenUpCode)))
+    if (isGivenUp(error))
       return new ProblemError(
         'database-away',
         'The database took too long over this request, which was given up. Nothing was changed and nothing stored is lost; hold and stop still work. Try again, and if it happens again ask for less at once, for instance a shorter time.',
       );
-    if (isSomewhere(error, saysAway))
+    if (isDatabaseAway(error))
       return new ProblemError(
         'database-away',
         `The database does not answer ${awaySince(databaseAwaySinceUtcMs)}. Nothing was changed; ${haltWords(haltsAnyway)} Try again in a few seconds.`,

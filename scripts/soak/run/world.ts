@@ -11,6 +11,7 @@ import { sha256Hex } from '@/server/evaluation/sha256';
 import type { Clock } from '@/server/interfaces/clock';
 import { type RunStore, type RunWrite, StaleRunError, type StoredRun } from '@/server/interfaces/run-store';
 import type { TurntableLink } from '@/server/interfaces/turntable-link';
+import { isPassing } from '@/server/store/failures';
 import { createLink } from '@/server/links/link-driver';
 import { createSimulatedController, type SimulatedController } from '@/server/links/simulated-controller';
 import { Room } from './room';
@@ -20,6 +21,8 @@ import { Room } from './room';
 const settle = async () => {
   for (let turn = 0; turn < 12; turn += 1) await null;
 };
+
+const databaseAway = () => Object.assign(new Error('the connection broke before the answer'), { code: 'ECONNRESET' });
 
 /** A database in memory: what is not plain data is lost in it, and it can be away. */
 export class SimulatedStore implements RunStore {
@@ -34,7 +37,7 @@ export class SimulatedStore implements RunStore {
   constructor(private readonly start: RunStart) {}
 
   async load(): Promise<StoredRun | null> {
-    if (this.away) throw new Error('the database is away');
+    if (this.away) throw databaseAway();
     const kept = this.stored === null ? { snapshot: null, chartVersion: 0 } : (JSON.parse(this.stored) as object);
     return { start: this.start, ...(kept as { snapshot: unknown; chartVersion: number }), chain: this.head() };
   }
@@ -46,7 +49,7 @@ export class SimulatedStore implements RunStore {
 
   async commit(write: RunWrite): Promise<void> {
     this.onCommit('before');
-    if (this.away) throw new Error('the database is away');
+    if (this.away) throw databaseAway();
     if (this.head().seq !== write.expectedSeq) throw new StaleRunError(`the chain ends at ${this.head().seq}`);
     this.events.push(...structuredClone(write.events));
     for (const row of structuredClone(write.steps)) this.rows.set(row.seq, row);
@@ -54,7 +57,7 @@ export class SimulatedStore implements RunStore {
     this.onCommit('after');
     if (this.loseAnswers === 0) return;
     this.loseAnswers -= 1;
-    throw new Error('the connection broke before the answer');
+    throw databaseAway();
   }
 
   /** Of the run, as stored. */
@@ -187,8 +190,13 @@ export class World {
   async comeBack(): Promise<void> {
     if (this.alive || this.store.away) return;
     const supervisor = this.openServer();
-    const { taken } = await supervisor.recover();
-    if (taken[0] !== undefined) this.follow(taken[0]);
+    const { rigId } = this.start;
+    await supervisor.recover();
+    // The database may have gone away again at that very moment.
+    while (supervisor.activeOf(rigId) === null && supervisor.takenBy(rigId) !== null)
+      await new Promise<void>((resolve) => void this.clock.after(20, resolve));
+    const taken = supervisor.activeOf(rigId);
+    if (taken !== null) this.follow(taken);
     else if (this.supervisor === supervisor) this.endedBefore = this.store.state();
   }
 
@@ -257,6 +265,7 @@ export class World {
     link.open();
     this.supervisor = new RigSupervisor({
       ...{ store: this.store, journals: this.journals, clock: this.machineClock, sha256: sha256Hex },
+      isPassing,
       linkOf: () => link,
       armOf: () => this.arm,
       guidedBy: () => null,

@@ -1,7 +1,7 @@
 import type { Clock } from '@/server/interfaces/clock';
 import type { IdempotencyAnswer } from '@/server/interfaces/idempotency';
 import type { Addressee, ProcessMessage, ProcessPost, RigPlace, RigQuestion, RigReply } from '@/server/interfaces/process-post';
-import { isDatabaseAway } from '../errors';
+import { isDatabaseAway } from '../../store/failures';
 import { ProblemError } from '../problem-error';
 import { addressOf, longestSilenceMs, maybeDone, nothingDone, rigsAway, type AskedOfRig, type RigDesk } from './rig-desk';
 

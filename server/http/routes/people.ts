@@ -10,7 +10,7 @@ import { openInvitations, withdrawInvitation, type Invitation } from '@/server/s
 import { changeLab } from '@/server/store/labs';
 import { changeMember, memberOf, membersOf, membershipsOf, type Member } from '@/server/store/people';
 import type { Role } from '@/shared/contracts/roles';
-import { isDatabaseAway } from '../errors';
+import { isDatabaseAway } from '../../store/failures';
 import { isoOf } from '../maker';
 import { originForLinks } from '../origin';
 import { notFound, ProblemError } from '../problem-error';

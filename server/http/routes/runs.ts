@@ -7,7 +7,7 @@ import * as store from '@/server/store/runs-read';
 import { archiveInputOf, assertEnded } from '../archive-input';
 import { assertFreshTap, beginRehearsal, beginRun } from '../begin-run';
 import { atTheRig, rigOfBody, rigOfItsRun } from '../desk/at-the-rig';
-import { isDatabaseAway } from '../errors';
+import { isDatabaseAway } from '../../store/failures';
 import { isoOf } from '../maker';
 import { decodeCursor, pageFrom } from '../paging';
 import { notFound } from '../problem-error';

@@ -1,7 +1,9 @@
 import pino from 'pino';
 import { demoIds, seedDemo } from '@/db/demo/seed';
 import { LeaseKeeper, type LeaseParts } from '@/server/boot/lease-keeper';
+import { RigTaking } from '@/server/boot/take-rigs';
 import { VirtualClock } from '@/server/engine/virtual-clock';
+import type { StationRig } from '@/server/interfaces/rig-stations';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { sha256 } from '@/tests/support/lab-server';
 
@@ -89,4 +91,51 @@ test('a database that does not answer for more than 4 s is told of, with the beg
   await clock.advance(1_500);
   expect(told[1]).toBeNull();
   await one.close();
+});
+
+describe('the taking over of rigs', () => {
+  /** A process that holds every lease, with a second rig whose line is set up as the first one's. */
+  function taking(put: (rigId: string) => void) {
+    clock = new VirtualClock(startUtcMs, settle);
+    const [opened, recovered, later]: [string[], number[], Promise<unknown>[]] = [[], [], []];
+    const services = {
+      ...{ clock, database: database().connection, log: pino({ level: 'silent' }), watchedLabs: () => [] },
+      background: (work: Promise<unknown>) => later.push(work),
+      access: { refresh: async () => undefined },
+      supervisor: { recover: async () => void recovered.push(clock.monotonicMs()) },
+    };
+    const stations = {
+      put: async ({ id }: { id: string }) => {
+        put(id);
+        opened.push(id);
+      },
+    };
+    const keep = { load: async () => undefined };
+    const side = { leases: { holds: () => true, epochOf: async () => 1 }, arms: keep, locks: keep, stations };
+    return { rigs: new RigTaking(...([services, side] as unknown as ConstructorParameters<typeof RigTaking>)), opened, recovered, later };
+  }
+
+  test('is tried again a second later when the database goes away at that very moment', async () => {
+    let failures = 2;
+    const { rigs, opened, recovered, later } = taking(() => {
+      if (failures > 0) throw Object.assign(new Error('the connection broke'), { code: 'ECONNRESET', failures: (failures -= 1) });
+    });
+    await expect(rigs.takenOver(rig)).rejects.toThrow('the connection broke');
+    await clock.advance(900);
+    expect([opened, later]).toEqual([[], []]);
+    await clock.advance(100);
+    await expect(later[0]).rejects.toThrow('the connection broke');
+    await clock.advance(1_000);
+    await later[1];
+    expect([opened, recovered, later.length]).toEqual([[demoIds.rig], [clock.monotonicMs()], 2]);
+  });
+
+  test('goes on with the others where the line of one cannot be opened', async () => {
+    const { rigs, opened, recovered } = taking((rigId) => {
+      if (rigId === 'broken') throw new Error('no such baud rate');
+    });
+    const found = (id: string) => ({ ...rig, id }) as unknown as StationRig;
+    await rigs.takeAll([found('broken'), found('sound')]);
+    expect([opened, recovered.length]).toEqual([['sound'], 1]);
+  });
 });

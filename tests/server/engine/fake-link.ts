@@ -27,7 +27,8 @@ interface Going {
  */
 export class FakeLink implements TurntableLink {
   readonly commands: LinkCommand[] = [];
-  readonly motions: { commandId: string; beganUtcMs: number }[] = [];
+  /** `unheard`: no command could reach the turntable when it began. */
+  readonly motions: { commandId: string; beganUtcMs: number; unheard: boolean }[] = [];
   bootId = 'boot-1';
   up = true;
   angleDeg: number | null = 0;
@@ -44,7 +45,7 @@ export class FakeLink implements TurntableLink {
   private waiting: { id: string; cancel: () => void } | null = null;
   private readonly listeners = new Set<(event: LinkEvent) => void>();
   private readonly unsaid: LinkEvent[] = [];
-  private readonly unconfirmed: string[] = [];
+  private readonly unconfirmed: Extract<LinkCommand, { kind: 'hold' | 'stop' }>[] = [];
   /** What happened to commands, as the controller's ring keeps it. */
   private readonly ring: Extract<LinkEvent, { commandId: string }>[] = [];
 
@@ -147,7 +148,7 @@ export class FakeLink implements TurntableLink {
     this.up = true;
     for (const event of this.unsaid.splice(0)) this.tell(event);
     this.tell({ kind: 'ready', at: this.at(), controller: this.controller(), sameBoot });
-    for (const id of this.unconfirmed.splice(0)) this.confirm(id);
+    for (const command of this.unconfirmed.splice(0)) this.halt(command);
   }
 
   /** The process that repeated unconfirmed stops and read events again is gone. */
@@ -245,7 +246,7 @@ export class FakeLink implements TurntableLink {
     const toDeg = command.kind === 'home' ? 0 : command.targetDeg;
     const speed = command.kind === 'home' ? { speedDegS: 0.6, accelerationDegS2: 2 } : command;
     const { durationS, angleDegAt } = trapezoid({ fromDeg, toDeg, speedDegS: speed.speedDegS, accelerationDegS2: speed.accelerationDegS2 });
-    this.motions.push({ commandId: command.id, beganUtcMs: this.clock.utcMs() });
+    this.motions.push({ commandId: command.id, beganUtcMs: this.clock.utcMs(), unheard: !this.up });
     const cancel = this.clock.after(1000 * durationS, () => {
       this.going = null;
       this.angleDeg = toDeg;
@@ -258,7 +259,7 @@ export class FakeLink implements TurntableLink {
 
   private halt(command: Extract<LinkCommand, { kind: 'hold' | 'stop' }>): void {
     if (!this.up) {
-      this.unconfirmed.push(command.id);
+      this.unconfirmed.push(command);
       return;
     }
     this.clock.after(5, () => {

@@ -51,6 +51,8 @@ export const runStart = (protocol: ProtocolDocument = shortProtocol, more: Parti
   ...more,
 });
 
+const databaseAway = () => Object.assign(new Error('the connection broke before the answer'), { code: 'ECONNRESET' });
+
 /** Keeps runs as JSON text, as a database would: what is not plain data is lost. */
 export class MemoryStore implements RunStore {
   stored: string | null = null;
@@ -73,7 +75,7 @@ export class MemoryStore implements RunStore {
 
   async commit(write: RunWrite): Promise<void> {
     const fault = this.fault(write);
-    if (fault === 'away') throw new Error('the database is away');
+    if (fault === 'away') throw databaseAway();
     const head = this.events.at(-1);
     if ((head?.seq ?? 0) !== write.expectedSeq) throw new StaleRunError(`the chain ends at ${head?.seq ?? 0}`);
     this.events.push(...(JSON.parse(JSON.stringify(write.events)) as ChainedEvent[]));
@@ -82,7 +84,7 @@ export class MemoryStore implements RunStore {
     const chain = last === undefined ? { seq: 0, hash: '0'.repeat(64) } : { seq: last.seq, hash: last.hash };
     this.stored = JSON.stringify({ start: this.start, snapshot: write.snapshot, chartVersion: write.chartVersion, chain });
     this.writes += 1;
-    if (fault === 'answer-lost') throw new Error('the connection broke before the answer');
+    if (fault === 'answer-lost') throw databaseAway();
   }
 
   log(): StepRow[] {

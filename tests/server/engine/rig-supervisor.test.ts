@@ -1,6 +1,7 @@
 import { MemoryJournals } from '@/server/engine/memory-journal';
-import { RigSupervisor, StartRefused } from '@/server/engine/rig-supervisor';
+import { type QuarantinedRun, RigSupervisor, StartRefused } from '@/server/engine/rig-supervisor';
 import { VirtualClock } from '@/server/engine/virtual-clock';
+import { isPassing } from '@/server/store/failures';
 import type { Arm, Effect } from '@/server/engine/run-context';
 import type { RunStart } from '@/shared/archive/run-records';
 import type { RunStore, RunWrite, StoredRun } from '@/server/interfaces/run-store';
@@ -29,6 +30,7 @@ interface Lab {
   performed: Effect[];
   arms: Map<string, Arm>;
   journals: MemoryJournals;
+  quarantined: QuarantinedRun[];
   newSupervisor(): RigSupervisor;
   make(more?: Partial<RunStart>): RunStart;
   north: FakeLink;
@@ -41,6 +43,7 @@ function makeLab(): Lab {
   const performed: Effect[] = [];
   const arms = new Map<string, Arm>(['north-bench', 'south-bench'].map((rigId) => [rigId, runStart().arm as Arm]));
   const journals = new MemoryJournals();
+  const quarantined: QuarantinedRun[] = [];
   const newSupervisor = () =>
     new RigSupervisor({
       store: runs,
@@ -53,9 +56,11 @@ function makeLab(): Lab {
       whyDisarmed: () => '',
       lockedBy: () => null,
       perform: (effect) => performed.push(effect),
+      isPassing,
+      onQuarantine: (run) => quarantined.push(run),
     });
   const make = (more: Partial<RunStart> = {}) => runs.add(runStart(shortProtocol, more));
-  return { clock, links, runs, performed, arms, journals, newSupervisor, make, north: links.get('north-bench') as FakeLink };
+  return { clock, links, runs, performed, arms, journals, quarantined, newSupervisor, make, north: links.get('north-bench') as FakeLink };
 }
 
 const refusal = (start: () => unknown): StartRefused => {
@@ -136,30 +141,85 @@ test.each([
   });
 });
 
-test('a database that goes away again while the next process brings a journal in blocks no rig: the run is taken up when it is back', async () => {
-  const lab = makeLab();
-  const [first, start] = [lab.newSupervisor(), lab.make()];
+/** A run that was held while the database was away; what it wrote lies in the journal of a process that is gone. */
+async function leftInJournal(lab: Lab, more: Partial<RunStart> = {}): Promise<{ start: RunStart; store: MemoryStore }> {
+  const [first, start] = [lab.newSupervisor(), lab.make(more)];
   first.startRun(start);
   await lab.clock.advance(20_000);
   const store = lab.runs.byId.get(start.runId) as MemoryStore;
-  const head = store.events.length;
   store.fault = () => 'away';
   first.activeOf(start.rigId)?.hold('Ben');
   await lab.clock.advance(5_000);
   first.close();
   expect(await lab.journals.of(start).read()).not.toEqual([]);
+  return { start, store };
+}
+
+describe('a database that goes away again while the next process brings a journal in', () => {
+  test('blocks no rig: the run is taken up when it is back, and until then no other starts there', async () => {
+    const lab = makeLab();
+    const { start, store } = await leftInJournal(lab);
+    const head = store.events.length;
+    const next = lab.newSupervisor();
+    await next.recover();
+    await lab.clock.advance(1_200_000);
+    expect([next.activeOf(start.rigId), lab.quarantined]).toEqual([null, []]);
+    expect(refusal(() => next.startRun(lab.make({ runId: 'run-2' })))).toMatchObject({
+      code: 'rig-busy',
+      message: expect.stringContaining('as soon as the database answers'),
+    });
+    store.fault = () => 'answer-lost';
+    await lab.clock.advance(6_000);
+    store.fault = () => 'none';
+    await lab.clock.advance(8_000);
+    expect(store.events.slice(head).map(({ kind }) => kind)).toContain('hold-requested');
+    expect(next.activeOf(start.rigId)?.facts().state).toBe('held');
+    expect(next.takenBy(start.rigId)).toContain('another run (held)');
+  });
+
+  test('keeps no other rig waiting', async () => {
+    const lab = makeLab();
+    await leftInJournal(lab);
+    const other = lab.newSupervisor();
+    other.startRun(lab.make({ runId: 'run-2', rigId: 'south-bench' }));
+    await lab.clock.advance(20_000);
+    other.close();
+    const next = lab.newSupervisor();
+    await next.recover();
+    await lab.clock.advance(2_000);
+    expect(next.activeOf('north-bench')).toBeNull();
+    expect(next.activeOf('south-bench')?.facts().state).toBe('held');
+  });
+
+  test('leaves the rig alone for good once another process drives it', async () => {
+    const lab = makeLab();
+    const { start, store } = await leftInJournal(lab);
+    const next = lab.newSupervisor();
+    await next.recover();
+    next.letGo(start.rigId);
+    store.fault = () => 'none';
+    const { writes } = store;
+    await lab.clock.advance(60_000);
+    expect([next.activeOf(start.rigId), next.takenBy(start.rigId), store.writes - writes]).toEqual([null, null, 0]);
+  });
+});
+
+test('a journal that the database refuses blocks its rig at once, with a sentence, and no other', async () => {
+  const lab = makeLab();
+  const { start, store } = await leftInJournal(lab);
+  const unlike = Object.assign(new Error('Failed query: insert into …'), { cause: new Error('value too long for type character varying(8)') });
+  store.fault = () => {
+    throw unlike;
+  };
+  const other = lab.newSupervisor();
+  other.startRun(lab.make({ runId: 'run-2', rigId: 'south-bench' }));
+  await lab.clock.advance(20_000);
+  other.close();
   const next = lab.newSupervisor();
-  const recovered = next.recover();
-  await lab.clock.advance(60_000);
-  expect(next.activeOf(start.rigId)).toBeNull();
-  store.fault = () => 'answer-lost';
-  await lab.clock.advance(6_000);
-  store.fault = () => 'none';
-  await lab.clock.advance(6_000);
-  expect(await recovered).toMatchObject({ taken: [{ runId: start.runId }], quarantined: [] });
-  await lab.clock.advance(2_000);
-  expect(store.events.slice(head).map(({ kind }) => kind)).toContain('hold-requested');
-  expect(next.activeOf(start.rigId)?.facts().state).toBe('held');
+  await next.recover();
+  expect(lab.quarantined).toMatchObject([{ start: { runId: start.runId }, why: expect.stringContaining('value too long') }]);
+  expect(next.takenBy(start.rigId)).toMatch(/blocked by an unfinished run.*value too long.*Look at the rig, then end the run\.$/);
+  expect(next.activeOf('south-bench')?.runId).toBe('run-2');
 });
 
 describe('a protocol that does not home', () => {
@@ -220,8 +280,8 @@ test.each([
   await lab.clock.advance(5_000);
   const second = lab.newSupervisor();
   second.onChange((_, { facts }) => seen.push(facts.state));
-  const { taken, quarantined } = await second.recover();
-  expect({ taken: taken.map(({ runId }) => runId), quarantined }).toEqual({ taken: ['run-1'], quarantined: [] });
+  await second.recover();
+  expect([second.activeOf('north-bench')?.runId, lab.quarantined]).toEqual(['run-1', []]);
   await lab.clock.advance(2_000);
   expect(seen.at(-1)).toBe(state);
   const gapS = lab.runs.byId.get('run-1')?.events.find(({ kind }) => kind === 'server-restarted')?.data['gapS'];
@@ -240,16 +300,17 @@ test('a run that was stored and never began is taken up by its protocol’s rule
     chain: { seq: 0, hash: '0'.repeat(64) },
   });
   const supervisor = lab.newSupervisor();
-  const { taken } = await supervisor.recover();
+  await supervisor.recover();
+  const taken = supervisor.activeOf('north-bench');
   await lab.clock.advance(2_000);
-  expect(taken[0]?.facts().state).toBe('held');
+  expect(taken?.facts().state).toBe('held');
   expect(lab.north.motions).toEqual([]);
   lab.arms.delete('north-bench');
-  await taken[0]?.resume('Ada Quill').then((answer) => expect(answer.ok).toBe(false));
+  await taken?.resume('Ada Quill').then((answer) => expect(answer.ok).toBe(false));
   lab.arms.set('north-bench', { name: 'Ada Quill', untilUtcMs: startUtcMs + 3_600_000 });
-  await taken[0]?.resume('Ada Quill');
+  await taken?.resume('Ada Quill');
   await lab.clock.advance(300_000);
-  expect(taken[0]?.facts().state).toBe('finished');
+  expect(taken?.facts().state).toBe('finished');
 });
 
 test('a run of another chart version is quarantined: nothing is sent, and its rig stays blocked with a sentence', async () => {
@@ -262,9 +323,9 @@ test('a run of another chart version is quarantined: nothing is sent, and its ri
     chain: { seq: 0, hash: '0'.repeat(64) },
   });
   const supervisor = lab.newSupervisor();
-  const { taken, quarantined } = await supervisor.recover();
-  expect(taken).toEqual([]);
-  expect(quarantined).toMatchObject([{ start: { runId: 'run-1' }, why: expect.stringContaining('another version') }]);
+  await supervisor.recover();
+  expect(supervisor.activeOf('north-bench')).toBeNull();
+  expect(lab.quarantined).toMatchObject([{ start: { runId: 'run-1' }, why: expect.stringContaining('another version') }]);
   expect(refusal(() => supervisor.startRun(lab.make({ runId: 'run-2' })))).toMatchObject({
     code: 'rig-busy',
     message: expect.stringContaining('unfinished run'),
