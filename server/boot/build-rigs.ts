@@ -102,7 +102,11 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     guidedBy: (rigId) => guided.takenBy(rigId),
     samplesOf,
     perform: performing(arms, wiring),
-    ...{ isPassing, onQuarantine: wiring.onQuarantine },
+    isPassing,
+    onQuarantine: (run) => {
+      log.error({ runId: run.start.runId, rigId: run.start.rigId }, run.why);
+      wiring.onQuarantine(run);
+    },
     onError: (error, { runId, rigId }) => log.error({ err: error, runId, rigId }, 'a run went wrong'),
   });
 

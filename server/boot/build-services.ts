@@ -66,8 +66,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   let awaySinceUtcMs: number | null = null;
   const nowUtcMs = () => clock.utcMs();
   const post = createPost(parts, log);
-  const samples = createSampleStore(database);
-  const recent = new RecentSamples();
+  const [samples, recent] = [createSampleStore(database), new RecentSamples()];
   const sessions = createSessions({ db: database.db, clock, newToken, sha256: sha256Hex });
   const { arms, arming, locks, leases, stations, supervisor, guided, apparatus, soak } = buildRigSide(parts, {
     ...{ holder: post?.process ?? randomUUID(), log, background, samples },
@@ -75,10 +74,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     onLine: (rigId) => (lines.changed(rigId), told.rigChanged(rigId)),
     onTaken: (rig) => background.add(taking.takenOver(rig), 'taking a rig over'),
     onDatabase: (sinceUtcMs) => watch.noteDatabase((awaySinceUtcMs = sinceUtcMs)),
-    onQuarantine: ({ start: { runId, rigId }, why }) => {
-      services.activeRuns.remove(runId);
-      log.error({ runId, rigId }, why);
-    },
+    onQuarantine: ({ start }) => services.activeRuns.remove(start.runId),
     onNotice: (start, notice) => tellStarter(services, start, notice),
     onLinkEvent: (station, event, wasArmed) => watch.heard(station, event, wasArmed),
   });

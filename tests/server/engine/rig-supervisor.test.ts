@@ -1,77 +1,10 @@
-import { MemoryJournals } from '@/server/engine/memory-journal';
-import { type QuarantinedRun, RigSupervisor, StartRefused } from '@/server/engine/rig-supervisor';
-import { VirtualClock } from '@/server/engine/virtual-clock';
-import { isPassing } from '@/server/store/failures';
-import type { Arm, Effect } from '@/server/engine/run-context';
 import type { RunStart } from '@/shared/archive/run-records';
-import type { RunStore, RunWrite, StoredRun } from '@/server/interfaces/run-store';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import type { RigMotion } from '@/shared/rig/document';
-import { FakeLink } from './fake-link';
-import { MemoryStore, runStart, settle, sha256, shortProtocol, startUtcMs } from './rig-bench';
-
-/** Several runs behind one store interface. */
-class Runs implements RunStore {
-  readonly byId = new Map<string, MemoryStore>();
-  add(start: RunStart): RunStart {
-    this.byId.set(start.runId, new MemoryStore(start));
-    return start;
-  }
-  load = (_labId: string, runId: string): Promise<StoredRun | null> => this.byId.get(runId)?.load() ?? Promise.resolve(null);
-  unfinished = async (): Promise<StoredRun[]> => (await Promise.all([...this.byId.values()].map((store) => store.unfinished()))).flat();
-  commit = (write: RunWrite): Promise<void> => (this.byId.get(write.runId) as MemoryStore).commit(write);
-}
-
-interface Lab {
-  clock: VirtualClock;
-  links: Map<string, FakeLink>;
-  runs: Runs;
-  performed: Effect[];
-  arms: Map<string, Arm>;
-  journals: MemoryJournals;
-  quarantined: QuarantinedRun[];
-  newSupervisor(): RigSupervisor;
-  make(more?: Partial<RunStart>): RunStart;
-  north: FakeLink;
-}
-
-function makeLab(): Lab {
-  const clock = new VirtualClock(startUtcMs, settle);
-  const links = new Map(['north-bench', 'south-bench'].map((rigId) => [rigId, new FakeLink(clock)]));
-  const runs = new Runs();
-  const performed: Effect[] = [];
-  const arms = new Map<string, Arm>(['north-bench', 'south-bench'].map((rigId) => [rigId, runStart().arm as Arm]));
-  const journals = new MemoryJournals();
-  const quarantined: QuarantinedRun[] = [];
-  const newSupervisor = () =>
-    new RigSupervisor({
-      store: runs,
-      journals,
-      clock,
-      sha256,
-      linkOf: (rigId) => links.get(rigId) ?? null,
-      guidedBy: () => null,
-      armOf: (rigId) => arms.get(rigId) ?? null,
-      whyDisarmed: () => '',
-      lockedBy: () => null,
-      perform: (effect) => performed.push(effect),
-      isPassing,
-      onQuarantine: (run) => quarantined.push(run),
-    });
-  const make = (more: Partial<RunStart> = {}) => runs.add(runStart(shortProtocol, more));
-  return { clock, links, runs, performed, arms, journals, quarantined, newSupervisor, make, north: links.get('north-bench') as FakeLink };
-}
-
-const refusal = (start: () => unknown): StartRefused => {
-  try {
-    start();
-  } catch (error) {
-    if (error instanceof StartRefused) return error;
-    throw error;
-  }
-  throw new Error('it was not refused');
-};
+import type { FakeLink } from './fake-link';
+import { type MemoryStore, shortProtocol, startUtcMs } from './rig-bench';
+import { makeLab, refusal } from './two-rigs';
 
 test('one run to a rig: a second start is refused until the first is over, another rig is free', async () => {
   const lab = makeLab();
@@ -139,87 +72,6 @@ test.each([
     code: 'not-ready',
     message: expect.stringContaining(words),
   });
-});
-
-/** A run that was held while the database was away; what it wrote lies in the journal of a process that is gone. */
-async function leftInJournal(lab: Lab, more: Partial<RunStart> = {}): Promise<{ start: RunStart; store: MemoryStore }> {
-  const [first, start] = [lab.newSupervisor(), lab.make(more)];
-  first.startRun(start);
-  await lab.clock.advance(20_000);
-  const store = lab.runs.byId.get(start.runId) as MemoryStore;
-  store.fault = () => 'away';
-  first.activeOf(start.rigId)?.hold('Ben');
-  await lab.clock.advance(5_000);
-  first.close();
-  expect(await lab.journals.of(start).read()).not.toEqual([]);
-  return { start, store };
-}
-
-describe('a database that goes away again while the next process brings a journal in', () => {
-  test('blocks no rig: the run is taken up when it is back, and until then no other starts there', async () => {
-    const lab = makeLab();
-    const { start, store } = await leftInJournal(lab);
-    const head = store.events.length;
-    const next = lab.newSupervisor();
-    await next.recover();
-    await lab.clock.advance(1_200_000);
-    expect([next.activeOf(start.rigId), lab.quarantined]).toEqual([null, []]);
-    expect(refusal(() => next.startRun(lab.make({ runId: 'run-2' })))).toMatchObject({
-      code: 'rig-busy',
-      message: expect.stringContaining('as soon as the database answers'),
-    });
-    store.fault = () => 'answer-lost';
-    await lab.clock.advance(6_000);
-    store.fault = () => 'none';
-    await lab.clock.advance(8_000);
-    expect(store.events.slice(head).map(({ kind }) => kind)).toContain('hold-requested');
-    expect(next.activeOf(start.rigId)?.facts().state).toBe('held');
-    expect(next.takenBy(start.rigId)).toContain('another run (held)');
-  });
-
-  test('keeps no other rig waiting', async () => {
-    const lab = makeLab();
-    await leftInJournal(lab);
-    const other = lab.newSupervisor();
-    other.startRun(lab.make({ runId: 'run-2', rigId: 'south-bench' }));
-    await lab.clock.advance(20_000);
-    other.close();
-    const next = lab.newSupervisor();
-    await next.recover();
-    await lab.clock.advance(2_000);
-    expect(next.activeOf('north-bench')).toBeNull();
-    expect(next.activeOf('south-bench')?.facts().state).toBe('held');
-  });
-
-  test('leaves the rig alone for good once another process drives it', async () => {
-    const lab = makeLab();
-    const { start, store } = await leftInJournal(lab);
-    const next = lab.newSupervisor();
-    await next.recover();
-    next.letGo(start.rigId);
-    store.fault = () => 'none';
-    const { writes } = store;
-    await lab.clock.advance(60_000);
-    expect([next.activeOf(start.rigId), next.takenBy(start.rigId), store.writes - writes]).toEqual([null, null, 0]);
-  });
-});
-
-test('a journal that the database refuses blocks its rig at once, with a sentence, and no other', async () => {
-  const lab = makeLab();
-  const { start, store } = await leftInJournal(lab);
-  const unlike = Object.assign(new Error('Failed query: insert into …'), { cause: new Error('value too long for type character varying(8)') });
-  store.fault = () => {
-    throw unlike;
-  };
-  const other = lab.newSupervisor();
-  other.startRun(lab.make({ runId: 'run-2', rigId: 'south-bench' }));
-  await lab.clock.advance(20_000);
-  other.close();
-  const next = lab.newSupervisor();
-  await next.recover();
-  expect(lab.quarantined).toMatchObject([{ start: { runId: start.runId }, why: expect.stringContaining('value too long') }]);
-  expect(next.takenBy(start.rigId)).toMatch(/blocked by an unfinished run.*value too long.*Look at the rig, then end the run\.$/);
-  expect(next.activeOf('south-bench')?.runId).toBe('run-2');
 });
 
 describe('a protocol that does not home', () => {

@@ -1,0 +1,86 @@
+import type { RunStart } from '@/shared/archive/run-records';
+import type { MemoryStore } from './rig-bench';
+import { type Lab, makeLab, refusal } from './two-rigs';
+
+/** A run that was held while the database was away; what it wrote lies in the journal of a process that is gone. */
+async function leftInJournal(lab: Lab, more: Partial<RunStart> = {}): Promise<{ start: RunStart; store: MemoryStore }> {
+  const [first, start] = [lab.newSupervisor(), lab.make(more)];
+  first.startRun(start);
+  await lab.clock.advance(20_000);
+  const store = lab.runs.byId.get(start.runId) as MemoryStore;
+  store.fault = () => 'away';
+  first.activeOf(start.rigId)?.hold('Ben');
+  await lab.clock.advance(5_000);
+  first.close();
+  expect(await lab.journals.of(start).read()).not.toEqual([]);
+  return { start, store };
+}
+
+describe('a database that goes away again while the next process brings a journal in', () => {
+  test('blocks no rig: the run is taken up when it is back, and until then no other starts there', async () => {
+    const lab = makeLab();
+    const { start, store } = await leftInJournal(lab);
+    const head = store.events.length;
+    const next = lab.newSupervisor();
+    await next.recover();
+    await lab.clock.advance(1_200_000);
+    expect([next.activeOf(start.rigId), lab.quarantined]).toEqual([null, []]);
+    expect(refusal(() => next.startRun(lab.make({ runId: 'run-2' })))).toMatchObject({
+      code: 'rig-busy',
+      message: expect.stringContaining('as soon as the database answers'),
+    });
+    store.fault = () => 'answer-lost';
+    await lab.clock.advance(6_000);
+    store.fault = () => 'none';
+    await lab.clock.advance(8_000);
+    expect(store.events.slice(head).map(({ kind }) => kind)).toContain('hold-requested');
+    expect(next.activeOf(start.rigId)?.facts().state).toBe('held');
+    expect(next.takenBy(start.rigId)).toContain('another run (held)');
+  });
+
+  test('keeps no other rig waiting', async () => {
+    const lab = makeLab();
+    await leftInJournal(lab);
+    const other = lab.newSupervisor();
+    other.startRun(lab.make({ runId: 'run-2', rigId: 'south-bench' }));
+    await lab.clock.advance(20_000);
+    other.close();
+    const next = lab.newSupervisor();
+    await next.recover();
+    await lab.clock.advance(2_000);
+    expect(next.activeOf('north-bench')).toBeNull();
+    expect(next.activeOf('south-bench')?.facts().state).toBe('held');
+  });
+
+  test('leaves the rig alone for good once another process drives it', async () => {
+    const lab = makeLab();
+    const { start, store } = await leftInJournal(lab);
+    const next = lab.newSupervisor();
+    await next.recover();
+    next.letGo(start.rigId);
+    store.fault = () => 'none';
+    const { writes } = store;
+    await lab.clock.advance(60_000);
+    expect([next.activeOf(start.rigId), next.takenBy(start.rigId), store.writes - writes]).toEqual([null, null, 0]);
+  });
+});
+
+test('a journal that the database refuses blocks its rig at once, with a sentence, and no other', async () => {
+  const lab = makeLab();
+  const { start, store } = await leftInJournal(lab);
+  const unlike = Object.assign(new Error('Failed query: insert into …'), {
+    cause: new Error('value too long for type character varying(8)'),
+  });
+  store.fault = () => {
+    throw unlike;
+  };
+  const other = lab.newSupervisor();
+  other.startRun(lab.make({ runId: 'run-2', rigId: 'south-bench' }));
+  await lab.clock.advance(20_000);
+  other.close();
+  const next = lab.newSupervisor();
+  await next.recover();
+  expect(lab.quarantined).toMatchObject([{ start: { runId: start.runId }, why: expect.stringContaining('value too long') }]);
+  expect(next.takenBy(start.rigId)).toMatch(/blocked by an unfinished run.*value too long.*Look at the rig, then end the run\.$/);
+  expect(next.activeOf('south-bench')?.runId).toBe('run-2');
+});
