@@ -75,6 +75,8 @@ function innermost(error: unknown): string {
 }
 
 const LONGEST_PAUSE_MS = 5_000;
+/** A process that has lost a rig is told so within this, ms: it renews its leases as often. */
+const LOSS_KNOWN_MS = 1_000;
 
 export type SupervisorListener = (driver: RunDriver, change: RunChange) => void;
 
@@ -244,6 +246,19 @@ export class RigSupervisor {
     this.parts.onQuarantine?.(run);
   }
 
+  /**
+   * A process that has lost the rig, and does not know it yet as one that was frozen, may have written once more after this one had taken
+   * the run up. This one takes it up anew, unless it is told meanwhile that it is the one that has lost it.
+   */
+  private lookAgain(driver: RunDriver): void {
+    const { start } = driver.parts;
+    if (this.byRig.get(start.rigId) !== driver) return;
+    this.byRig.delete(start.rigId);
+    const found = { start, snapshot: driver.state(), chartVersion: CHART_VERSION, chain: driver.head() };
+    this.undecided.set(start.rigId, found);
+    this.parts.clock.after(LOSS_KNOWN_MS, () => void this.takeUp(found));
+  }
+
   private unfitness({ start, chartVersion, snapshot }: StoredRun): string | null {
     if (snapshot !== null && restored(snapshot, chartVersion) === null) {
       return `The run was saved by another version of the run engine (${chartVersion}; this one reads ${CHART_VERSION}). Look at the rig, then end the run.`;
@@ -268,6 +283,7 @@ export class RigSupervisor {
       lockedBy: () => lockedBy(start.rigId),
       perform: (effect) => perform(effect, start),
       onError: (error) => onError?.(error, start),
+      onTakenOver: () => this.lookAgain(driver),
     });
     this.byRig.set(start.rigId, driver);
     driver.onChange((change) => {

@@ -34,6 +34,8 @@ export interface RunDriverParts {
   perform(effect: OwnEffect): void;
   /** An error that is nobody's answer: of a listener, of `perform`, or one that made the driver let go of the run. */
   onError?(error: unknown): void;
+  /** Another process has written on in the run's log: this driver has let go of it. */
+  onTakenOver?(): void;
 }
 
 /** What one saved transition changed. */

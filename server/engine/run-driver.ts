@@ -296,6 +296,7 @@ export class RunDriver {
   private takenOver(): void {
     this.stale = true;
     this.close();
+    this.parts.onTakenOver?.();
   }
 
   private performEffect(effect: Effect): void {

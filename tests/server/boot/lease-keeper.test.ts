@@ -12,8 +12,23 @@ const rig = { labId: demoIds.lab, rigId: demoIds.rig };
 const startUtcMs = Date.UTC(2031, 1, 14, 20);
 const leaseMs = 3_000;
 
-/** Lets what was asked of the database be answered before time goes on. */
-const settle = () => new Promise<void>((resolve) => void setTimeout(resolve, 15));
+let unanswered = 0;
+/** Lets what was asked of the database be answered before time goes on, and what is asked thereupon. */
+const settle = async (): Promise<void> => {
+  do await new Promise<void>((resolve) => void setImmediate(resolve));
+  while (unanswered > 0);
+};
+
+/** From now on what was asked and not answered is counted. */
+function countQuestions(): void {
+  const { pool } = database().connection;
+  const query = pool.query.bind(pool) as (...args: unknown[]) => unknown;
+  const counted = (...args: unknown[]) => {
+    unanswered += 1;
+    return Promise.resolve(query(...args)).finally(() => (unanswered -= 1));
+  };
+  Object.assign(pool, { query: counted });
+}
 let clock = new VirtualClock(startUtcMs, settle);
 
 function keeper(holder: string, more: Partial<LeaseParts> = {}): LeaseKeeper {
@@ -26,6 +41,7 @@ function keeper(holder: string, more: Partial<LeaseParts> = {}): LeaseKeeper {
 
 beforeAll(async () => {
   await seedDemo(database().connection, { nowUtcMs: startUtcMs, hashPassword: async () => 'no password in this test', sha256 });
+  countQuestions();
 });
 
 test('a lease that is being renewed while the server ends is free for the next one at once', async () => {

@@ -1,5 +1,6 @@
 import type { RunStart } from '@/shared/archive/run-records';
-import type { MemoryStore } from './rig-bench';
+import { verifyChain } from '@/shared/archive/chain';
+import { type MemoryStore, sha256, shortProtocol } from './rig-bench';
 import { type Lab, makeLab, refusal } from './two-rigs';
 
 /** A run that was held while the database was away; what it wrote lies in the journal of a process that is gone. */
@@ -83,4 +84,47 @@ test('a journal that the database refuses blocks its rig at once, with a sentenc
   expect(lab.quarantined).toMatchObject([{ start: { runId: start.runId }, why: expect.stringContaining('value too long') }]);
   expect(next.takenBy(start.rigId)).toMatch(/blocked by an unfinished run.*value too long.*Look at the rig, then end the run\.$/);
   expect(next.activeOf('south-bench')?.runId).toBe('run-2');
+});
+
+test('a frozen process that writes once more, after another has taken its rig over, leaves no run without a driver', async () => {
+  const lab = makeLab();
+  const [frozen, next] = [lab.newSupervisor(), lab.newSupervisor()];
+  const start = lab.make({ protocol: { ...shortProtocol, onInterruption: 'resume' } });
+  frozen.startRun(start);
+  await lab.clock.advance(20_000);
+  const { load } = lab.runs;
+  lab.runs.load = async (...of) => {
+    lab.runs.load = load;
+    const found = await load(...of);
+    // It wakes here: the other has read the run, and has not written yet.
+    frozen.activeOf(start.rigId)?.holdAfterDwell('Ben');
+    await frozen.idle();
+    return found;
+  };
+  await next.recover();
+  await lab.clock.advance(100);
+  frozen.letGo(start.rigId);
+  await lab.clock.advance(5_000);
+  expect(next.activeOf(start.rigId)?.facts().state).toBe('running');
+  const { events } = lab.runs.byId.get(start.runId) as MemoryStore;
+  expect(events.map(({ kind }) => kind).slice(-4)).toEqual(['hold-after-dwell-requested', 'server-restarted', 'link-ready', 'resumed']);
+  expect(verifyChain(events, sha256)).toMatchObject({ valid: true });
+  await lab.clock.advance(60_000);
+  expect(next.activeOf(start.rigId)?.facts()).toMatchObject({ state: 'held', reasonCode: 'hold-after-dwell' });
+});
+
+test('a process that finds its run driven by another, and is told then that the rig is lost, lets it be', async () => {
+  const lab = makeLab();
+  const [lost, next] = [lab.newSupervisor(), lab.newSupervisor()];
+  const start = lab.make({ protocol: { ...shortProtocol, onInterruption: 'resume' } });
+  lost.startRun(start);
+  await lab.clock.advance(20_000);
+  await next.recover();
+  await lab.clock.advance(500);
+  lost.activeOf(start.rigId)?.holdAfterDwell('Ben');
+  await lab.clock.advance(500);
+  expect(lost.activeOf(start.rigId)).toBeNull();
+  lost.letGo(start.rigId);
+  await lab.clock.advance(5_000);
+  expect([lost.activeOf(start.rigId), next.activeOf(start.rigId)?.facts().state]).toEqual([null, 'running']);
 });
