@@ -6,6 +6,7 @@ import { inertiaKgM2 } from '../physics/oscillator';
 import { SingularMatrixError } from '../statistics/symmetric';
 import { analyse, type Analysis } from './analysis';
 import { controlTest } from './empty-control';
+import { regressionsOf, type Regressions } from './environment';
 import type { Known } from './free-oscillator';
 import type { Budget } from './budget';
 import { budgetFor, kappaU, periodBudget, trialModelOf } from './g-budget';
@@ -36,6 +37,7 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
   const analysis = analysisOf(archive, plan);
   const { reversal } = analysis;
   const { solution, free, budget, trialModel } = plan.method === 'period' ? byPeriod(archive, analysis) : byEquilibria(archive, analysis);
+  const { regressions, warnings } = plan.method === 'period' ? nothing : regressionsOf(archive, plan, { analysis, budget });
   const u = budget?.u ?? null;
   const kappa = { value: inertiaKgM2(archive.rig) * free.omega0Squared.value, u: kappaU(archive.rig, free.omega0Squared) };
   const result: EvaluationResult = {
@@ -58,10 +60,14 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     budget: budget?.lines ?? null,
     monteCarlo: trialModel === null ? null : monteCarlo(trialModel, options.trials ?? 0),
     ...(hasSwings(archive) ? {} : { pretend: pretendOf(analysis) }),
-    warnings: [...archive.warnings, ...registrationWarnings(archive, plan), ...warningsOf(archive, analysis)],
+    ...(regressions.length === 0 ? {} : { regressions }),
+    warnings: [...archive.warnings, ...registrationWarnings(archive, plan), ...warningsOf(archive, analysis), ...warnings],
   };
   return { result, curves: curvesOf(analysis), trialModel };
 }
+
+/** The time of swing looks at no difference of the dwells. */
+const nothing: Regressions = { regressions: [], warnings: [] };
 
 interface Found extends Pick<Analysis, 'solution' | 'free'> {
   budget: Budget | null;

@@ -42,6 +42,27 @@ const budgetLineSchema = z.strictObject({
   share: z.number(),
 });
 
+const differenceAndG = z.strictObject({
+  reversal_rad: withU,
+  G: z.strictObject({ value: z.number(), u: z.number().nullable() }).nullable(),
+});
+
+/** What would change if the part that goes with a channel of the surroundings were taken off; offered beside the result, never in it. */
+const regressionResultSchema = z.strictObject({
+  channel: z.string(),
+  /** Unit of the channel. */
+  unit: z.string(),
+  /** Near and far dwells in which the channel has samples. */
+  dwells: z.number().int(),
+  /** Of the scatter that the u of the coefficient comes from. */
+  degreesOfFreedom: z.number(),
+  /** Pendulum angle over the channel's mean in a dwell. */
+  coefficient: z.strictObject({ value: z.number(), u: z.number(), unit: z.string() }),
+  without: differenceAndG,
+  with: differenceAndG,
+});
+export type RegressionResult = z.infer<typeof regressionResultSchema>;
+
 export const evaluationResultSchema = z.strictObject({
   formatVersion: z.literal(1),
   method: z.enum(['equilibrium', 'period', 'acceleration', 'modulation']),
@@ -63,6 +84,8 @@ export const evaluationResultSchema = z.strictObject({
     .strictObject({ trials: z.number().int(), G_mean: z.number(), G_u: z.number(), interval95: z.tuple([z.number(), z.number()]) })
     .nullable(),
   pretend: pretendResultSchema.nullable().optional(),
+  /** Absent where no channel of the surroundings could be compared. */
+  regressions: z.array(regressionResultSchema).optional(),
   warnings: z.array(z.strictObject({ code: z.string(), message: z.string() })),
 });
 export type EvaluationResult = z.infer<typeof evaluationResultSchema>;

@@ -71,7 +71,7 @@ export function isMember({ window }: Segment): boolean {
 }
 
 /** Middle of the dwell, s; the instant at which its centre is taken. */
-function middleS({ window }: Segment): number {
+export function middleS({ window }: Segment): number {
   const { startUtcMs, endUtcMs } = window.row;
   return (startUtcMs + (endUtcMs ?? startUtcMs)) / 2000;
 }

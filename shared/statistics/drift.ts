@@ -38,7 +38,7 @@ export function isAlternating(series: readonly SidedValue[]): boolean {
  */
 export function abaDifference(series: readonly SidedValue[]): DifferenceEstimate {
   if (series.length < 3 || !isAlternating(series)) throw new Error('ABA windows need an alternating series of at least three');
-  const windows = series.slice(2).map((_, k) => abaWindow(series, k));
+  const windows = abaWindows(series);
   const count = windows.length;
   const weights = new Array<number>(series.length).fill(0);
   windows.forEach(({ weights: three }, k) => three.forEach((w, i) => (weights[k + i] = (weights[k + i] as number) + (2 * w) / count)));
@@ -55,6 +55,9 @@ interface Window {
   eta: number;
   weights: [number, number, number];
 }
+
+/** Half the difference as each value and its two neighbours give it; `weights` are those of the three. */
+export const abaWindows = (series: readonly SidedValue[]): Window[] => series.slice(2).map((_, k) => abaWindow(series, k));
 
 function abaWindow(series: readonly SidedValue[], k: number): Window {
   const [a, b, c] = [series[k], series[k + 1], series[k + 2]] as [SidedValue, SidedValue, SidedValue];
@@ -127,7 +130,8 @@ export function polynomialDifference(series: readonly SidedValue[], order: numbe
   throw new Error('a difference needs values on both sides');
 }
 
-function legendreColumns(times: readonly number[], order: number): number[][] {
+/** Legendre polynomials of 0 to `order` over the span of the times. */
+export function legendreColumns(times: readonly number[], order: number): number[][] {
   const first = Math.min(...times);
   const span = Math.max(...times) - first;
   const x = times.map((t) => (span > 0 ? (2 * (t - first)) / span - 1 : 0));
