@@ -14,7 +14,7 @@ import type { EvaluationPlan } from './registration';
 import type { RegressionResult } from './result';
 import { middleS } from './reversal';
 import { centreOf } from './ring-down-fit';
-import { solveG } from './solve-g';
+import { NoSolutionError, solveG, type GSystem } from './solve-g';
 
 /** What the channels of the surroundings would change, beside the result and never in it. */
 export interface Regressions {
@@ -109,14 +109,23 @@ function gWith(
 ): { value: number; u: number | null } | null {
   if (system === null || solution === null) return null;
   const phiRad = (segment: number) => ((segments[segment]?.window.angleDeg ?? 0) * Math.PI) / 180;
-  const { bigG } = solveG(
-    { ...system, reversalRad: reversalRad.value, members: members.map(({ segment, weight }) => ({ phiRad: phiRad(segment), weight })) },
-    solution.bigG,
-  );
+  const weighed = members.map(({ segment, weight }) => ({ phiRad: phiRad(segment), weight }));
+  const bigG = solvedOrNull({ ...system, reversalRad: reversalRad.value, members: weighed }, solution.bigG);
+  if (bigG === null) return null;
   const line = budget?.lines.find(({ input }) => input === 'reversal_rad');
   if (budget === null || line === undefined) return { value: bigG, u: null };
   const rest = Math.max(0, budget.u ** 2 - line.contribution ** 2);
   return { value: bigG, u: Math.sqrt(rest + (line.sensitivity * reversalRad.u) ** 2) };
+}
+
+/** A part taken off may leave a difference that no G gives. */
+function solvedOrNull(system: GSystem, startG: number): number | null {
+  try {
+    return solveG(system, startG).bigG;
+  } catch (error) {
+    if (error instanceof NoSolutionError) return null;
+    throw error;
+  }
 }
 
 /** How probable a coefficient so far from 0 is where nothing goes with the channel. */
