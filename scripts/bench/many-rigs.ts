@@ -1,61 +1,63 @@
 import { fork } from 'node:child_process';
-import { mkdtempSync, rmSync } from 'node:fs';
-import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import { buildServer, type BuiltServer } from '@/server/boot/build-server';
-import { readConfig } from '@/server/boot/config';
-import { RealClock } from '@/server/boot/real-clock';
-import type { ProtocolDocument } from '@/shared/protocol/document';
-import { withDatabase, type BenchDatabase } from './lib/fresh-database';
+import { LEAD_MS } from '@/server/engine/timing';
 import { LabClient, pause } from './lib/lab-client';
-import { manyRigs } from './lib/more-rigs';
-import { addMembers, seedLab } from './lib/people';
+import { manyRigs, type BenchRig } from './lib/more-rigs';
+import { addMembers } from './lib/people';
+import { withServerHere, type ServerHere } from './lib/server-here';
+import { swingsWith } from './lib/swings';
 import { growth, quantile, report } from './report';
 
 /**
  * Up to 100 simulated rigs in one process, each with a run whose steps follow every 10 s and a deflection of 10 samples a second, on a real
- * database. How late a step is: from its instant until it is stored and acted on. The peer is a process that does nothing but wait.
+ * database. Lateness of a step is from the instant at which its command was due, 1.5 s before the planned end of the dwell, until that command
+ * leaves on the line; its peer is a process that does nothing but wait. Motion is how far the beginning, by the controller's clock, lies from
+ * the instant that was asked for. Stored is how long after the controller's edge the step is in the database and acted on: people see it
+ * then, and no motion waits for it, so it has no goal.
  */
 
 const sizes = [25, 50, 100];
 const settlingMs = 5_000;
 const measuredMs = 30_000;
-
-/** Dwells of 10 s and, in between, swings that take about as long. */
-const steady: ProtocolDocument = {
-  formatVersion: 1,
-  name: 'A step each 10 s',
-  steps: [
-    { kind: 'home' },
-    {
-      kind: 'repeat',
-      times: 500,
-      steps: [
-        { kind: 'swing', to: 'near' },
-        { kind: 'dwell', for_s: 10 },
-        { kind: 'swing', to: 'far' },
-        { kind: 'dwell', for_s: 10 },
-      ],
-    },
-  ],
-};
+const dwellS = 10;
 
 interface Figures {
   lateMs: number[];
+  motionMs: number[];
+  storedMs: number[];
   /** Share of one core. */
   core: number;
   /** What the timers of an idle process were late by, ms. */
   bareMs: number[];
 }
 
-async function watch(server: BuiltServer): Promise<Figures> {
+/** When the command that a rig was given last, and has not sent yet, was due; UTC ms by rig. */
+type Due = Map<string, number>;
+
+/** Takes down when each move that is sent ahead was due. */
+function noteDue({ server }: ServerHere, rigs: readonly BenchRig[], due: Due): void {
+  for (const { id } of rigs) {
+    const link = server.services.stations.get(id)?.link;
+    if (link === undefined) throw new Error('a rig of the benchmark has no line');
+    const send = link.send.bind(link);
+    link.send = (command) => {
+      if (command.kind === 'move' && command.startUtcMs !== null) due.set(id, command.startUtcMs - LEAD_MS);
+      send(command);
+    };
+  }
+}
+
+async function watch({ server, clock }: ServerHere, lateMs: number[]): Promise<Figures> {
   await pause(settlingMs);
-  const [lateMs, bareMs]: [number[], number[]] = [[], []];
+  lateMs.length = 0;
+  const [motionMs, storedMs, bareMs]: [number[], number[], number[]] = [[], [], []];
   const peer = fork(join(__dirname, 'lib', 'bare-timer.ts'), [], { execArgv: ['--import', 'tsx'] });
   peer.on('message', (late) => bareMs.push(...(late as number[])));
-  const leave = server.services.supervisor.onChange((_, { events }) => {
-    const nowMs = Date.now();
-    for (const { kind, at } of events) if (kind === 'step-began') lateMs.push(nowMs - Date.parse(at));
+  const leave = server.services.supervisor.onChange((_, { steps, events }) => {
+    const nowMs = clock.utcMs();
+    for (const { kind, at } of events) if (kind === 'step-began') storedMs.push(nowMs - Date.parse(at));
+    for (const { kind, startUtcMs, plannedStartUtcMs, outcome } of steps)
+      if (kind === 'swing' && outcome === null) motionMs.push(Math.abs(startUtcMs - plannedStartUtcMs));
   });
   const [before, beganMs] = [process.cpuUsage(), performance.now()];
   await pause(measuredMs);
@@ -63,59 +65,46 @@ async function watch(server: BuiltServer): Promise<Figures> {
   const core = (user + system) / 1000 / (performance.now() - beganMs);
   leave();
   peer.disconnect();
-  return { lateMs, core, bareMs };
+  return { lateMs: [...lateMs], motionMs, storedMs, core, bareMs };
 }
 
-async function measure(database: BenchDatabase, stateDir: string): Promise<void> {
-  const rigs = await manyRigs(database, Math.max(...sizes));
-  const [cookie] = await addMembers(database, 'operator');
-  const config = readConfig({
-    NODE_ENV: 'production',
-    DATABASE_URL: database.url,
-    PORT: '0',
-    EVENFALL_STATE_DIR: stateDir,
-    EVENFALL_WEB_DIR: 'none',
-    EVENFALL_LOG_LEVEL: 'error',
-    EVENFALL_REQUESTS_PER_MINUTE: '1000000',
-    EVENFALL_INTERVENTIONS_PER_MINUTE: '1000000',
-  });
-  const server = buildServer({
-    ...{ database: database.connection, clock: new RealClock() },
-    config: { ...config, virtualExitDelayS: 0 },
-  });
-  const address = await server.listen();
-  await server.start();
-  try {
-    const points: { size: number; cost: number }[] = [];
-    let running = 0;
-    for (const size of sizes) {
-      for (; running < size; running += 1) {
-        const lab = new LabClient(address, cookie, rigs[running]);
-        await lab.arm();
-        await lab.start(await lab.issue(steady));
-      }
-      const { lateMs, core, bareMs } = await watch(server);
-      const [name, peer] = [`many-rigs ${String(size)}`, quantile(bareMs, 0.99)];
-      report({ name: `${name} lateness`, value: quantile(lateMs, 0.99), unit: 'ms p99', goal: 20, want: 'at most', peer });
-      report({ name: `${name} core`, value: 100 * core, unit: '% of a core', goal: 60, want: 'at most', peer: null });
-      points.push({ size, cost: core });
+async function measure(here: ServerHere, rigs: readonly BenchRig[], lateMs: number[]): Promise<void> {
+  const [cookie] = await addMembers(here.database, 'operator');
+  const points: { size: number; cost: number }[] = [];
+  let running = 0;
+  for (const size of sizes) {
+    for (; running < size; running += 1) {
+      const lab = new LabClient(here.address, cookie, rigs[running]);
+      await lab.arm();
+      await lab.start(await lab.issue(swingsWith(dwellS)));
     }
-    report({ name: 'many-rigs growth', value: growth(points), unit: 'exponent', goal: 1.2, want: 'at most', peer: null });
-  } finally {
-    await server.stop();
+    const { core, bareMs, ...found } = await watch(here, lateMs);
+    const p99 = (name: string, values: readonly number[]) =>
+      ({ name: `many-rigs ${String(size)} ${name}`, value: quantile(values, 0.99), unit: 'ms p99' }) as const;
+    report({ ...p99('lateness', found.lateMs), goal: 20, want: 'at most', peer: quantile(bareMs, 0.99) });
+    report({ ...p99('motion', found.motionMs), goal: 20, want: 'at most', peer: null });
+    report({ ...p99('stored', found.storedMs), goal: null, want: 'told', peer: null });
+    report({ name: `many-rigs ${String(size)} core`, value: 100 * core, unit: '% of a core', goal: 60, want: 'at most', peer: null });
+    points.push({ size, cost: core });
   }
+  report({ name: 'many-rigs growth', value: growth(points), unit: 'exponent', goal: 1.2, want: 'at most', peer: null });
 }
 
 async function run(): Promise<void> {
-  const stateDir = mkdtempSync(join(tmpdir(), 'evenfall-bench-rigs-'));
-  try {
-    await withDatabase(async (database) => {
-      await seedLab(database);
-      await measure(database, stateDir);
-    });
-  } finally {
-    rmSync(stateDir, { recursive: true, force: true });
-  }
+  const due: Due = new Map();
+  const lateMs: number[] = [];
+  let rigs: BenchRig[] = [];
+  const ear = (rigId: string, { order }: { order: { word: string } }) => {
+    const dueMs = due.get(rigId);
+    if (order.word !== 'move' || dueMs === undefined) return;
+    lateMs.push(Date.now() - dueMs);
+    due.delete(rigId);
+  };
+  const prepare = async (database: ServerHere['database']) => void (rigs = await manyRigs(database, Math.max(...sizes)));
+  await withServerHere({ ear, prepare }, async (here) => {
+    noteDue(here, rigs, due);
+    await measure(here, rigs, lateMs);
+  });
 }
 
 void run();

@@ -6,13 +6,15 @@ interface Figure {
   peer: number | null;
 }
 
-/** One measurement: whether a smaller (`at most`) or a greater (`at least`) value than the goal is wanted, or one between two. */
-export type Measurement = Figure & ({ goal: number; want: 'at most' | 'at least' } | { goal: readonly [number, number]; want: 'within' });
+/** One measurement: whether a smaller (`at most`) or a greater (`at least`) value than the goal is wanted, or one between two; or it is only told. */
+export type Measurement = Figure &
+  ({ goal: number; want: 'at most' | 'at least' } | { goal: readonly [number, number]; want: 'within' } | { goal: null; want: 'told' });
 
 const rounded = (value: number) => Number(value.toPrecision(5));
 
 function meetsGoal(measurement: Measurement): boolean {
   const { value } = measurement;
+  if (measurement.want === 'told') return true;
   if (measurement.want === 'within') return measurement.goal[0] <= value && value <= measurement.goal[1];
   return measurement.want === 'at most' ? value <= measurement.goal : value >= measurement.goal;
 }

@@ -3,8 +3,8 @@ import type { ChainedEvent } from '@/shared/archive/run-records';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { LabClient } from './lab-client';
 
-/** Swings and short dwells for an hour and more, carried on by themselves after whatever may be. */
-export const swings: ProtocolDocument = {
+/** Swings and dwells of so many seconds for an hour and more, carried on by themselves after whatever may be. */
+export const swingsWith = (dwellS: number): ProtocolDocument => ({
   formatVersion: 1,
   name: 'Swings',
   onInterruption: 'resume',
@@ -15,13 +15,15 @@ export const swings: ProtocolDocument = {
       times: 500,
       steps: [
         { kind: 'swing', to: 'near' },
-        { kind: 'dwell', for_s: 3 },
+        { kind: 'dwell', for_s: dwellS },
         { kind: 'swing', to: 'far' },
-        { kind: 'dwell', for_s: 3 },
+        { kind: 'dwell', for_s: dwellS },
       ],
     },
   ],
-};
+});
+
+export const swings = swingsWith(3);
 
 /** The whole log of a run. */
 export async function eventsOf(lab: LabClient, runId: string): Promise<ChainedEvent[]> {
