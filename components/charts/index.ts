@@ -6,4 +6,5 @@ export { GScale } from './g-scale';
 export { BudgetBars, inputWords } from './budget-bars';
 export { FitPlot } from './fit-plot';
 export { ReversalPlot } from './reversal-plot';
+export { TorquePlot } from './torque-plot';
 export type { Series } from './curve';

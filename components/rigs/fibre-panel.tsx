@@ -4,7 +4,7 @@ import { fibreFacts, fibreWarnings, leastSafetyFactor } from '@/shared/physics/f
 import { formatUncertain } from '@/shared/lib/format-uncertain';
 import type { RigDocument } from '@/shared/rig/document';
 
-const kappaWords = (quantity: { value: number; u: number | null }) => formatUncertain({ ...quantity, unit: 'N m/rad' });
+const kappaWords = (quantity: { value: number; u: number }) => formatUncertain({ ...quantity, unit: 'N m/rad' });
 
 /** What the fibre's dimensions say beside the measured period, and how hard the pendulum pulls at it. */
 export function FibrePanel({ document }: { document: RigDocument }) {
@@ -25,7 +25,7 @@ export function FibrePanel({ document }: { document: RigDocument }) {
           {tensionKappa === null ? '' : `, and ${((100 * tensionKappa) / kappa.value).toPrecision(2)} % more by the tension`}.
         </Body>
       )}
-      {periodKappa === null ? null : <Body>By the measured period: {kappaWords({ value: periodKappa, u: null })}.</Body>}
+      {periodKappa === null ? null : <Body>By the measured period: {kappaWords(periodKappa)}.</Body>}
       <Label>The wire is never used for G: its torsion constant goes with the fourth power of the diameter.</Label>
       {fibreWarnings(facts).map((warning) => (
         <View key={warning} className="flex-row items-start gap-2">

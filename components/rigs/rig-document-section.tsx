@@ -26,6 +26,7 @@ export function RigDocumentSection({ rig, etag }: { rig: RigView; etag: string |
     <Section title={`Apparatus, revision ${rig.revision}`}>
       <View className="flex-row flex-wrap gap-2">
         <Button label="Revisions" onPress={() => router.push(`/rigs/${rig.id}/revisions` as Href)} testID="rig-revisions" />
+        <Button label="Stations" onPress={() => router.push(`/rigs/${rig.id}/stations` as Href)} testID="rig-stations" />
         <Button
           icon="export"
           label="JSON"

@@ -49,4 +49,5 @@ export const RunScreen = screen('RunScreen');
 export const RunningBar = screen('RunningBar');
 export const RunsScreen = screen('RunsScreen');
 export const StartScreen = screen('StartScreen');
+export const StationsScreen = screen('StationsScreen');
 export const StepLogScreen = screen('StepLogScreen');

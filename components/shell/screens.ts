@@ -18,6 +18,7 @@ export { RigRevisionsScreen } from '@/components/rigs/rig-revisions-screen';
 export { RigScreen } from '@/components/rigs/rig-screen';
 export { RigsScreen } from '@/components/rigs/rigs-screen';
 export { StartScreen } from '@/components/rigs/start-screen';
+export { StationsScreen } from '@/components/rigs/stations-screen';
 export { RunScreen } from '@/components/runs/run-screen';
 export { RunningBar } from '@/components/runs/running-bar';
 export { RunsScreen } from '@/components/runs/runs-screen';

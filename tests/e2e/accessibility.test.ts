@@ -58,6 +58,7 @@ function places(): Place[] {
   return [
     { name: 'rigs', path: '/rigs', arrives: 'rigs-screen' },
     { name: 'rig', path: rig, arrives: 'rig-screen' },
+    { name: 'stations', path: `${rig}/stations`, arrives: 'torque-plot' },
     { name: 'rig-revisions', path: `${rig}/revisions`, arrives: '' },
     { name: 'link', path: `${rig}/link`, arrives: 'link-screen', first: (hand) => hand.tapsOn('Serial line', 'radio') },
     {

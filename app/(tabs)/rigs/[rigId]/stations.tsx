@@ -1,0 +1,5 @@
+import { StationsScreen } from '@/components/shell/lazy-screens';
+
+export default function RigStations() {
+  return <StationsScreen />;
+}
