@@ -35,7 +35,6 @@ export function fibreFacts(rig: RigDocument): FibreFacts | null {
   };
 }
 
-
 /** κ = π G D⁴ / (32 l) */
 function wireKappa(length: Known, diameter: Known, shearModulus: Known): Known {
   const value = (Math.PI * shearModulus.value * diameter.value ** 4) / (32 * length.value);
