@@ -2,7 +2,7 @@ import type { Href } from 'expo-router';
 import { useState } from 'react';
 import { View } from 'react-native';
 import { useLab, useLabQuery, useMay, wordsOf } from '@/components/api';
-import { Body, Button, Field, Icon, Label, Loading, Num, Panel, ProblemNotice, Screen, Select, useWide } from '@/components/ui';
+import { Body, Button, Field, FilterGroup, Icon, Label, Loading, Num, Panel, ProblemNotice, Screen, Select } from '@/components/ui';
 import { checkAudit, type AuditCheck } from '@/shared/contracts/audit';
 import { formatClock, zoneName } from '@/shared/lib/format-time';
 import { AuditEntries, type AuditFilter } from './audit-entries';
@@ -84,23 +84,10 @@ interface FiltersProps extends Pick<AuditCheck, 'people' | 'kinds'> {
 }
 
 function Filters({ filter, people, kinds, onChange }: FiltersProps) {
-  const wide = useWide();
-  const [shown, setShown] = useState(false);
   const active = Object.entries(filter).some(([name, value]) => value !== noFilter[name as keyof AuditFilter]);
-  if (!wide && !shown)
-    return (
-      <Button
-        icon="filter"
-        label={active ? 'Filter is on' : 'Filter'}
-        onPress={() => setShown(true)}
-        expanded={false}
-        className="self-start"
-        testID="audit-filter"
-      />
-    );
   const set = (change: Partial<AuditFilter>) => onChange({ ...filter, ...change });
   return (
-    <View className="gap-3 wide:flex-row" role="group" aria-label="Filter of the audit">
+    <FilterGroup label="Filter of the audit" active={active} testID="audit-filter">
       <View className="wide:w-[200px]">
         <Select label="Person" value={filter.who} options={personChoices(people)} onChange={(who) => set({ who })} testID="audit-who" />
       </View>
@@ -115,6 +102,6 @@ function Filters({ filter, people, kinds, onChange }: FiltersProps) {
           <Field label="Until" type="date" value={filter.until} onChange={(until) => set({ until })} testID="audit-until" />
         </View>
       </View>
-    </View>
+    </FilterGroup>
   );
 }

@@ -2,7 +2,7 @@ import { useLocalSearchParams, type Href } from 'expo-router';
 import { useMemo, useState } from 'react';
 import { View } from 'react-native';
 import { addressOf, useLab, useLabQuery, wordsOf } from '@/components/api';
-import { Button, Empty, Label, Loading, Panel, ProblemNotice, Screen, Select, Tabs, useWide } from '@/components/ui';
+import { Empty, FilterGroup, Label, Loading, Panel, ProblemNotice, Screen, Select, Tabs, useWide } from '@/components/ui';
 import { getRun, listSteps, stepsCsv, type StepRowView } from '@/shared/contracts/runs';
 import { zoneName } from '@/shared/lib/format-time';
 import { DownloadLink } from './download-link';
@@ -95,23 +95,10 @@ const optionsOf = (all: string, values: readonly string[]) => [
 ];
 
 function Filters({ rows, filter, onChange }: { rows: readonly StepRowView[]; filter: StepFilter; onChange: (filter: StepFilter) => void }) {
-  const wide = useWide();
-  const [shown, setShown] = useState(false);
   const choices = useMemo(() => filterChoices(rows), [rows]);
   const active = filter !== noFilter && Object.values(filter).some((value) => value !== everything);
-  if (!wide && !shown)
-    return (
-      <Button
-        icon="filter"
-        label={active ? 'Filter is on' : 'Filter'}
-        onPress={() => setShown(true)}
-        expanded={false}
-        className="self-start"
-        testID="filter"
-      />
-    );
   return (
-    <View className="gap-3 wide:flex-row" role="group" aria-label="Filter of the step log">
+    <FilterGroup label="Filter of the step log" active={active} testID="filter">
       <View className="wide:w-[190px]">
         <Select
           label="Kind"
@@ -139,6 +126,6 @@ function Filters({ rows, filter, onChange }: { rows: readonly StepRowView[]; fil
           testID="filter-outcome"
         />
       </View>
-    </View>
+    </FilterGroup>
   );
 }

@@ -2,6 +2,7 @@ export { Button, IconButton, type ButtonKind, type ButtonProps } from './button'
 export { Chip } from './chip';
 export { Field, Select, type FieldProps } from './field';
 export { FileButton } from './file-button';
+export { FilterGroup } from './filter-group';
 export { FormField, showProblem } from './form-field';
 export { Icon, type IconName } from './icon';
 export { PressAndKeep } from './press-and-keep';

@@ -1,28 +1,12 @@
 import { View } from 'react-native';
-import { Label, Select } from '@/components/ui';
-import { formatDegrees } from '@/shared/lib/format-angle';
+import { Label } from '@/components/ui';
 import { formatDuration } from '@/shared/lib/format-duration';
 import type { KickStep } from '@/shared/protocol/document';
 import { partsDurationS, partsIfPossible } from '@/shared/protocol/step-parts';
 import type { RigDocument } from '@/shared/rig/document';
 import { NumberField, positive } from './number-field';
 import type { StepFormProps } from './step-form';
-
-const itself = ' itself';
-
-function targetOptions(rig: RigDocument | null, to: KickStep['to']) {
-  const stations = Object.entries(rig?.stations ?? {}).map(([name, { value }]) => ({
-    value: name,
-    label: `${name}, ${formatDegrees(value)}`,
-  }));
-  const known = to === undefined || typeof to !== 'string' || rig?.stations[to] !== undefined;
-  return [
-    { value: itself, label: 'far from near, else near' },
-    ...stations,
-    ...(known ? [] : [{ value: to, label: `${to} (not on this rig)` }]),
-    ...(typeof to === 'object' ? [{ value: ' angle', label: formatDegrees(to.angle_deg) }] : []),
-  ];
-}
+import { TargetField } from './target-field';
 
 /** How the kick would be made: `2 moves in 3.6 min, then a ring-down of 28 min.` */
 function movesWords(step: KickStep, rig: RigDocument | null, fromDeg: number | null): string {
@@ -35,16 +19,9 @@ function movesWords(step: KickStep, rig: RigDocument | null, fromDeg: number | n
 
 /** How far the pendulum is set swinging, and how long its ring-down is recorded. */
 export function KickForm({ step, onChange, rig, fromDeg, disabled }: StepFormProps<KickStep>) {
-  const choice = step.to === undefined ? itself : typeof step.to === 'string' ? step.to : ' angle';
-  const choose = (next: string) => {
-    const { to, ...rest } = step;
-    if (next === itself) onChange(rest);
-    else if (next !== ' angle') onChange({ ...step, to: next });
-    else onChange({ ...rest, ...(to === undefined ? {} : { to }) });
-  };
-  const withoutPeriods = () => {
+  const without = (name: 'periods' | 'to') => {
     const rest = { ...step };
-    delete rest.periods;
+    delete rest[name];
     return rest;
   };
   return (
@@ -65,17 +42,18 @@ export function KickForm({ step, onChange, rig, fromDeg, disabled }: StepFormPro
         placeholder="3"
         value={step.periods}
         refuse={positive}
-        onChange={(value) => onChange(value === undefined ? withoutPeriods() : { ...step, periods: value })}
+        onChange={(value) => onChange(value === undefined ? without('periods') : { ...step, periods: value })}
         disabled={disabled}
         testID="kick-periods"
       />
-      <Select
+      <TargetField
         label="There and back by"
-        value={choice}
-        options={targetOptions(rig, step.to)}
-        onChange={choose}
+        to={step.to}
+        onChange={(to) => onChange({ ...step, to })}
+        rig={rig}
+        unset={{ label: 'far from near, else near', choose: () => onChange(without('to')) }}
         disabled={disabled}
-        testID="kick-to"
+        testID="kick"
       />
       <Label>
         Sets the pendulum swinging by turning the sources there and back, half a period apart: the ring-down gives period and decay, and is

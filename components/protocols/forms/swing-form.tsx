@@ -1,50 +1,19 @@
 import { View } from 'react-native';
-import { Label, Select, Tabs } from '@/components/ui';
-import { formatDegrees } from '@/shared/lib/format-angle';
+import { Label, Tabs } from '@/components/ui';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { shapedForecast } from '@/shared/planning/shaped-forecast';
 import type { SwingStep } from '@/shared/protocol/document';
 import type { RigDocument } from '@/shared/rig/document';
 import { NumberField } from './number-field';
 import type { StepFormProps } from './step-form';
-
-const angleChoice = ' angle';
-
-function targetOptions(rig: RigDocument | null, present: string) {
-  const names = Object.keys(rig?.stations ?? {});
-  const known = present === angleChoice || names.includes(present) ? names : [...names, present];
-  return [
-    ...known.map((name) => ({
-      value: name,
-      label: rig?.stations[name] === undefined ? `${name} (not on this rig)` : `${name}, ${formatDegrees(rig.stations[name].value)}`,
-    })),
-    { value: angleChoice, label: 'an angle' },
-  ];
-}
+import { TargetField } from './target-field';
 
 /** Where the sources go, and how fast. */
 export function SwingForm({ step, onChange, rig, fromDeg, disabled }: StepFormProps<SwingStep>) {
-  const choice = typeof step.to === 'string' ? step.to : angleChoice;
   const motion = rig?.motion;
-  const choose = (next: string) =>
-    onChange({
-      ...step,
-      to:
-        next === angleChoice ? { angle_deg: typeof step.to === 'string' ? (rig?.stations[step.to]?.value ?? 0) : step.to.angle_deg } : next,
-    });
   return (
     <View className="gap-4">
-      <Select label="To" value={choice} options={targetOptions(rig, choice)} onChange={choose} disabled={disabled} testID="swing-to" />
-      {typeof step.to === 'string' ? null : (
-        <NumberField
-          label="Angle"
-          unit="°"
-          value={step.to.angle_deg}
-          onChange={(angle) => (angle === undefined ? undefined : onChange({ ...step, to: { angle_deg: angle } }))}
-          disabled={disabled}
-          testID="swing-angle"
-        />
-      )}
+      <TargetField label="To" to={step.to} onChange={(to) => onChange({ ...step, to })} rig={rig} disabled={disabled} testID="swing" />
       <View className="gap-4 min-[420px]:flex-row min-[420px]:*:flex-1">
         <NumberField
           label="Speed"
