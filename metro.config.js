@@ -10,11 +10,7 @@ config.resolver.resolveRequest = cutting(__dirname, (context, moduleName, platfo
   (resolveRequest ?? context.resolveRequest)(context, moduleName, platform),
 );
 
-// In parentheses a module's function is compiled whole while the file is still arriving, instead of being skimmed then and compiled when the page starts.
-config.transformer.minifierConfig = {
-  ...config.transformer.minifierConfig,
-  output: { ...config.transformer.minifierConfig.output, wrap_func_args: true },
-};
+config.transformer.minifierPath = require.resolve('./scripts/lib/minifier.cjs');
 
 // In development the page comes from here and the API from the server: one origin, so cookies and live streams work as in production.
 config.server.enhanceMiddleware = (middleware) => (request, response, next) => {

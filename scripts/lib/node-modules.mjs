@@ -26,7 +26,9 @@ export async function ensureNodeModules() {
   const difference = firstDifference();
   if (difference === null) return;
   say(`Installing the packages of package-lock.json, about a minute (first difference: ${difference}).`);
-  await waiting('waiting for npm ci', () => must('npm', ['ci', '--no-audit', '--no-fund'], { cwd: root }));
+  await waiting('waiting for npm ci', () =>
+    must('npm', ['ci', '--no-audit', '--no-fund', '--prefer-offline', '--maxsockets=60'], { cwd: root }),
+  );
   const left = firstDifference();
   if (left !== null) giveUp(`npm ci ended well, yet ${left} is not as package-lock.json says.`);
 }

@@ -16,6 +16,7 @@ const builders = [
   'service-worker.mjs',
   'web-cuts.cjs',
   'no-native-stack.cjs',
+  'minifier.cjs',
   'precompress.mjs',
 ].map((name) => join('scripts', 'lib', name));
 const sources = ['app', 'components', 'shared', 'assets', 'public', 'global.css', ...config, ...builders];
