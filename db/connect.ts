@@ -23,17 +23,25 @@ export interface ConnectOptions {
   maxConnections?: number;
   /** A statement that takes longer is cancelled, so that one bad query cannot hold a connection for ever. */
   statementTimeoutMs?: number;
+  /** A transaction in which nothing is said for so long is ended, so that a process that was frozen keeps no row locked; 0: never. */
+  idleInTransactionMs?: number;
   /** Told when an idle connection breaks (the database went away); the pool makes a new one by itself. */
   onLost?: (error: Error) => void;
 }
 
 /** Opens a pool of connections. Nothing is sent before the first query. Sessions speak UTC. */
-export function connect({ url, maxConnections = 10, statementTimeoutMs = 10_000, onLost = () => undefined }: ConnectOptions): Connection {
+export function connect({
+  url,
+  maxConnections = 10,
+  statementTimeoutMs = 10_000,
+  idleInTransactionMs = 0,
+  onLost = () => undefined,
+}: ConnectOptions): Connection {
   const pool = new Pool({
     connectionString: url,
     max: maxConnections,
     application_name: 'evenfall',
-    options: `-c timezone=UTC -c statement_timeout=${statementTimeoutMs}`,
+    options: `-c timezone=UTC -c statement_timeout=${statementTimeoutMs} -c idle_in_transaction_session_timeout=${idleInTransactionMs}`,
     connectionTimeoutMillis: 10_000,
     keepAlive: true,
   });

@@ -93,7 +93,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
   });
   const linkOf = (rigId: string) => stations.get(rigId)?.link ?? null;
   const supervisor: RigSupervisor = new RigSupervisor({
-    store: createRunStore(database.db),
+    store: createRunStore(database.db, wiring.holder),
     journals: overrides.journals ?? new FileJournals(join(parts.config.stateDir, 'journal')),
     ...{ clock, sha256: sha256Hex, serverName, linkOf },
     armOf: (rigId) => arms.armOf(rigId),

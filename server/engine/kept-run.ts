@@ -1,5 +1,5 @@
 import type { RunJournal } from '../interfaces/run-journal';
-import { type RunStore, StaleRunError, type StoredRun } from '../interfaces/run-store';
+import { RigLostError, type RunStore, StaleRunError, type StoredRun } from '../interfaces/run-store';
 import { mergeWrites, withAllToPerform } from './merge-journal';
 
 /**
@@ -18,7 +18,7 @@ export async function keptRun(
       await journal.clear();
     }
   } catch (error) {
-    if (!(error instanceof StaleRunError)) throw error;
+    if (!(error instanceof StaleRunError) || error instanceof RigLostError) throw error;
     const aside = await journal.setAside();
     onAside(new Error(`${error.message}; what this server had kept of it meanwhile lies in ${aside}`));
   }

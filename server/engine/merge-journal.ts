@@ -1,5 +1,5 @@
 import type { RunStore, RunWrite } from '../interfaces/run-store';
-import { StaleRunError } from '../interfaces/run-store';
+import { RigLostError, StaleRunError } from '../interfaces/run-store';
 import type { OwnEffect, StoredSnapshot } from './stored-snapshot';
 
 /** The writes as one: all rows and events in their order, and the state they end in. */
@@ -18,6 +18,7 @@ function joined(writes: readonly RunWrite[]): RunWrite {
  * Brings writes that a journal kept into the store, in one transaction. A part that got there already, although its answer was lost, is not
  * stored twice.
  * @throws StaleRunError when the store's chain goes on otherwise: another process has driven the run since
+ * @throws RigLostError when another process has the rig
  */
 export async function mergeWrites(store: RunStore, writes: readonly RunWrite[]): Promise<void> {
   const write = joined(writes);
@@ -26,7 +27,7 @@ export async function mergeWrites(store: RunStore, writes: readonly RunWrite[]):
       return await store.commit(await restOf(write, store));
     } catch (error) {
       // Between the look and the commit the write that was left to the journal may have got there after all: the next look tells.
-      if (!(error instanceof StaleRunError) || error instanceof OtherChain) throw error;
+      if (!(error instanceof StaleRunError) || error instanceof OtherChain || error instanceof RigLostError) throw error;
     }
   }
 }

@@ -4,7 +4,7 @@ import type { Finding } from '@/shared/protocol/finding';
 import { planTimeline } from '@/shared/protocol/timeline';
 import type { Clock } from '../interfaces/clock';
 import type { RunJournals } from '../interfaces/run-journal';
-import type { RunStore, StoredRun } from '../interfaces/run-store';
+import { RigLostError, type RunStore, type StoredRun } from '../interfaces/run-store';
 import type { SampleReader } from '../interfaces/sample-reader';
 import type { TurntableLink } from '../interfaces/turntable-link';
 import { isRunOver } from './chart';
@@ -37,7 +37,7 @@ export interface SupervisorParts {
   perform(effect: OwnEffect, start: RunStart): void;
   /** Whether an error only says that the database does not answer just now: what it was asked may be asked again. */
   isPassing(error: unknown): boolean;
-  /** A run cannot be taken up; its rig stays blocked until somebody decides. */
+  /** A run cannot be taken up, or broke off; its rig stays blocked until somebody decides. */
   onQuarantine?(run: QuarantinedRun): void;
   /** An error that is nobody's answer, to be logged. */
   onError?(error: unknown, start: RunStart): void;
@@ -56,7 +56,7 @@ export class StartRefused extends Error {
   }
 }
 
-/** A run that this version cannot take up: nothing is done with it, and its rig stays blocked until somebody decides. */
+/** A run that this version cannot take up or carry on: nothing is done with it, and its rig stays blocked until somebody decides. */
 export interface QuarantinedRun {
   start: RunStart;
   why: string;
@@ -227,7 +227,9 @@ export class RigSupervisor {
       if (isUndecided()) this.decide(start, stored);
     } catch (error) {
       if (!isUndecided()) return;
-      if (isPassing(error)) return void clock.after(Math.min(100 * 2 ** turn, LONGEST_PAUSE_MS), () => void this.takeUp(found, turn + 1));
+      // A process that has lost the rig is told so, and lets go of it.
+      if (isPassing(error) || error instanceof RigLostError)
+        return void clock.after(Math.min(100 * 2 ** turn, LONGEST_PAUSE_MS), () => void this.takeUp(found, turn + 1));
       onError?.(error, start);
       this.putAside({ start, why: `The run could not be taken up: ${innermost(error)} Look at the rig, then end the run.` });
     }
@@ -259,6 +261,14 @@ export class RigSupervisor {
     this.parts.clock.after(LOSS_KNOWN_MS, () => void this.takeUp(found));
   }
 
+  /** An error that no waiting mends. */
+  private broken(driver: RunDriver, error: unknown): void {
+    const { start } = driver.parts;
+    if (this.byRig.get(start.rigId) !== driver) return;
+    this.byRig.delete(start.rigId);
+    this.putAside({ start, why: `The run broke off and the turntable was held: ${innermost(error)} Look at the rig, then end the run.` });
+  }
+
   private unfitness({ start, chartVersion, snapshot }: StoredRun): string | null {
     if (snapshot !== null && restored(snapshot, chartVersion) === null) {
       return `The run was saved by another version of the run engine (${chartVersion}; this one reads ${CHART_VERSION}). Look at the rig, then end the run.`;
@@ -267,7 +277,7 @@ export class RigSupervisor {
   }
 
   private drive(start: RunStart, stored: StoredRun | null, link: TurntableLink): RunDriver {
-    const { store, journals, clock, sha256, armOf, whyDisarmed, lockedBy, samplesOf, perform, onError, serverName } = this.parts;
+    const { store, journals, clock, sha256, armOf, whyDisarmed, lockedBy, samplesOf, perform, onError, isPassing, serverName } = this.parts;
     const driver = new RunDriver({
       ...(serverName === undefined ? {} : { serverName }),
       ...(samplesOf === undefined ? {} : { samples: samplesOf(start.rigId) }),
@@ -282,7 +292,9 @@ export class RigSupervisor {
       whyDisarmed: () => whyDisarmed(start.rigId),
       lockedBy: () => lockedBy(start.rigId),
       perform: (effect) => perform(effect, start),
+      isPassing,
       onError: (error) => onError?.(error, start),
+      onBroken: (error) => this.broken(driver, error),
       onTakenOver: () => this.lookAgain(driver),
     });
     this.byRig.set(start.rigId, driver);

@@ -32,8 +32,12 @@ export interface RunDriverParts {
   serverName?: string;
   /** Notifications and the end of the arm, performed after they were saved. */
   perform(effect: OwnEffect): void;
+  /** Whether a failed write may simply be tried again; a store in memory fails for good. */
+  isPassing?(error: unknown): boolean;
   /** An error that is nobody's answer: of a listener, of `perform`, or one that made the driver let go of the run. */
   onError?(error: unknown): void;
+  /** That error made the driver hold the turntable and let go of the run, which has not ended. */
+  onBroken?(error: unknown): void;
   /** Another process has written on in the run's log: this driver has let go of it. */
   onTakenOver?(): void;
 }

@@ -58,6 +58,8 @@ export class RunDriver {
       onAway: (sinceUtcMs) => this.databaseIsAway(sinceUtcMs),
       onBack: () => this.databaseIsBack(),
       onStale: () => this.takenOver(),
+      onBroken: (error) => this.breakOff(error),
+      isPassing: (error) => parts.isPassing?.(error) ?? false,
       onError: (error) => parts.onError?.(error),
     });
     this.timers = new RunTimers(clock, {
@@ -181,7 +183,7 @@ export class RunDriver {
     this.unsubscribe();
     this.parts.link.setLeaseRule(() => false);
     this.timers.close();
-    this.inbox.length = 0;
+    for (const item of this.inbox.splice(0)) if (typeof item !== 'string') item.done?.(null);
   }
 
   private actFirst(kind: 'hold' | 'stop', by: string): Answer {
@@ -240,19 +242,23 @@ export class RunDriver {
     for (const resolve of this.waiting.splice(0)) resolve();
   }
 
-  /** What the loop cannot deal with: motion ends, and the next process takes the run up from what was saved. */
+  /** What the loop cannot deal with: motion ends, and somebody decides. The next process takes the run up from what was saved. */
   private breakOff(error: unknown): void {
     this.stale = true;
     this.outside(() => this.parts.link.send({ kind: 'hold', id: `${this.runId}-broken` }));
     this.close();
     this.parts.onError?.(error);
+    this.parts.onBroken?.(error);
   }
 
   private async take({ event, done }: Exclude<Item, string>): Promise<void> {
     const result = advanceSafely(this.parts.start, this.snapshot, event);
     const halted = event.type === 'hold' || event.type === 'stop';
     if (result.snapshot.context !== this.snapshot.context || result.snapshot.state !== this.snapshot.state)
-      await this.saveThenAct(result, halted);
+      await this.saveThenAct(result, halted).catch((error: unknown) => {
+        done?.(null);
+        throw error;
+      });
     else if (halted) this.halting -= 1;
     done?.(this.stale || this.closed ? null : result);
   }

@@ -19,6 +19,10 @@ export interface SaverParts {
   onBack(): void;
   /** Another process has driven the run on, while this one wrote its journal. */
   onStale(error: StaleRunError): void;
+  /** The database refuses what the journal kept, and will refuse it again: it stays in the journal. */
+  onBroken(error: unknown): void;
+  /** Whether what the database was asked may simply be asked again. */
+  isPassing(error: unknown): boolean;
   /** What else went wrong with the journal. */
   onError(error: unknown): void;
 }
@@ -81,7 +85,8 @@ export class RunSaver {
   /**
    * Saves in the database, or in the journal when the database does not take it within the grace (`hurried`: at once).
    * @returns whether the write is safe; false when the saver was closed meanwhile
-   * @throws StaleRunError when another process has driven this run on
+   * @throws StaleRunError when another process has driven this run on, or has its rig
+   * @throws what the database refuses the write with; the journal keeps the write then, for the next process
    */
   async save(write: RunWrite, { hurried = false } = {}): Promise<boolean> {
     // Whoever has let go of the run writes nothing more, not even into its journal.
@@ -106,6 +111,9 @@ export class RunSaver {
       const stored = await attempt.stored;
       this.back();
       return stored;
+    } catch (error) {
+      if (!this.closed && !(error instanceof StaleRunError)) await this.keep(write);
+      throw error;
     } finally {
       this.sinceMs = null;
       this.hurry = () => undefined;
@@ -169,7 +177,9 @@ export class RunSaver {
         this.merging = false;
         return this.back();
       } catch (error) {
+        if (this.closed) return;
         if (error instanceof StaleRunError) return this.parts.onStale(error);
+        if (!this.parts.isPassing(error)) return this.parts.onBroken(error);
         await this.pause(Math.min(100 * 2 ** attempt, LONGEST_PAUSE_MS));
       }
     }
@@ -179,20 +189,27 @@ export class RunSaver {
     const { write } = attempt;
     for (let turn = 0; !this.closed && !attempt.leftToJournal; turn += 1) {
       try {
-        await this.parts.store.commit(write);
+        await this.commit(write, turn > 0);
         return true;
       } catch (error) {
-        if (error instanceof StaleRunError) {
-          if (turn > 0 && (await this.isStored(write))) return true;
-          throw error;
-        }
+        if (error instanceof StaleRunError) throw error;
+        if (this.closed) return false;
+        if (!this.parts.isPassing(error)) throw error;
         await this.pause(Math.min(100 * 2 ** turn, LONGEST_PAUSE_MS));
       }
     }
     return false;
   }
 
-  /** A commit may have gone through although its answer was lost: then the chain already ends where the write ends. */
+  /** The answer to a commit may have been lost: then the chain already ends where the write ends. */
+  private async commit(write: RunWrite, again: boolean): Promise<void> {
+    try {
+      await this.parts.store.commit(write);
+    } catch (error) {
+      if (!again || !(error instanceof StaleRunError) || !(await this.isStored(write))) throw error;
+    }
+  }
+
   private async isStored(write: RunWrite): Promise<boolean> {
     const stored = await this.parts.store.load(write.labId, write.runId);
     const last = write.events.at(-1);

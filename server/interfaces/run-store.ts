@@ -5,6 +5,10 @@ export interface RunStore {
   load(labId: string, runId: string): Promise<StoredRun | null>;
   /** Runs that have not ended, of the rigs this process drives. */
   unfinished(): Promise<StoredRun[]>;
+  /**
+   * @throws StaleRunError when the chain ends elsewhere than the writer believes
+   * @throws RigLostError when another process has the rig
+   */
   commit(write: RunWrite): Promise<void>;
 }
 
@@ -42,3 +46,6 @@ export interface RunSummaryColumns {
 export class StaleRunError extends Error {
   readonly code = 'stale-run';
 }
+
+/** The lease of the run's rig is another process's: wherever the chain ends, this process writes nothing into it. */
+export class RigLostError extends StaleRunError {}

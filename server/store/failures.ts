@@ -1,12 +1,12 @@
 /** Kinds of failures of the database, as Node and PostgreSQL name them. */
 
-/** Codes of Node, and of PostgreSQL the classes 08, 53 and 57P: it cannot be reached, or is going away. */
-const awayCode = /^(ECONN\w+|EPIPE|ETIMEDOUT|ENOTFOUND|EAI_AGAIN|ENOENT|08\w{3}|53\w{3}|57P\d\d)$/;
+/** Codes of Node, and of PostgreSQL the classes 08, 53, 57P and 58, and 25P03: it cannot be reached, has hung up or is going away, or its disk fails. */
+const awayCode = /^(ECONN\w+|EHOST\w+|ENET\w+|EPIPE|ETIMEDOUT|ENOTFOUND|EAI_AGAIN|ENOENT|08\w{3}|25P03|53\w{3}|57P\d\d|58\w{3})$/;
 const awayText =
   /Connection terminated|timeout exceeded when trying to connect|Client has encountered a connection error|Cannot use a pool after calling end/;
 
-/** PostgreSQL gave a statement up: it took longer than its time limit (57014), or waited too long for a lock (55P03). */
-const givenUpCode = /^(57014|55P03)$/;
+/** PostgreSQL gave a statement up: past its time limit (57014), too long behind a lock (55P03), or for the sake of another (class 40). */
+const givenUpCode = /^(57014|55P03|40\w{3})$/;
 
 interface ErrorLike {
   code?: unknown;

@@ -1,9 +1,9 @@
-import { and, asc, eq, notInArray, sql } from 'drizzle-orm';
-import { runEvents, runs, runSteps } from '@/db/schema';
+import { and, asc, eq, exists, notInArray, sql } from 'drizzle-orm';
+import { rigLeases, runEvents, runs, runSteps } from '@/db/schema';
 import type { ChainHead } from '@/shared/archive/chain';
 import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
 import type { RunState } from '@/shared/contracts/runs';
-import { StaleRunError, type RunStore, type RunWrite, type StoredRun } from '../interfaces/run-store';
+import { RigLostError, StaleRunError, type RunStore, type RunWrite, type StoredRun } from '../interfaces/run-store';
 import type { Database, Handle, Transaction } from './database';
 
 /** Rows of one INSERT: PostgreSQL takes at most 65 535 parameters a statement. */
@@ -56,8 +56,11 @@ export async function insertRun(db: Handle, run: NewRun): Promise<boolean> {
 /** The condition of the partial unique index `runs_one_per_rig`. */
 const oneRunPerRig = sql`not rehearsal and state not in ('finished', 'stopped', 'failed')`;
 
-/** Runs in PostgreSQL. One commit is one transaction; the chain's end in `runs` is the fence against a second writer. */
-export function createRunStore(db: Database): RunStore {
+/**
+ * Runs in PostgreSQL. One commit is one transaction; the chain's end in `runs` is the fence against a second writer. `holder`: of the leases
+ * of the rigs whose runs are driven; without one, as for what a rehearsal left, nobody else can be driving.
+ */
+export function createRunStore(db: Database, holder: string | null = null): RunStore {
   return {
     load: async (labId, runId) => {
       const [row] = await db
@@ -74,7 +77,7 @@ export function createRunStore(db: Database): RunStore {
         .orderBy(asc(runs.createdAt));
       return rows.map(storedRunOf);
     },
-    commit: (write) => db.transaction((tx) => commit(tx, write)),
+    commit: (write) => db.transaction((tx) => commit(tx, write, holder)),
   };
 }
 
@@ -93,7 +96,7 @@ const storedRunOf = (row: { start: RunStart; snapshot: unknown; chartVersion: nu
   chain: { seq: row.lastSeq, hash: row.lastHash },
 });
 
-async function commit(tx: Transaction, write: RunWrite): Promise<void> {
+async function commit(tx: Transaction, write: RunWrite, holder: string | null): Promise<void> {
   const own = and(eq(runs.labId, write.labId), eq(runs.id, write.runId));
   const [row] = await tx.select({ lastSeq: runs.lastSeq, lastHash: runs.lastHash }).from(runs).where(own).for('update');
   if (row === undefined) throw new Error(`run ${write.runId} is not in the database: insert it before the first commit`);
@@ -106,7 +109,7 @@ async function commit(tx: Transaction, write: RunWrite): Promise<void> {
   await insertEvents(tx, write);
   await putSteps(tx, write);
   const { summary } = write;
-  await tx
+  const updated = await tx
     .update(runs)
     .set({
       snapshot: write.snapshot,
@@ -119,8 +122,20 @@ async function commit(tx: Transaction, write: RunWrite): Promise<void> {
       endedAt: summary.endedAtUtcMs,
       predictedEndAt: summary.predictedEndUtcMs,
     })
-    .where(own);
+    .where(holder === null ? own : and(own, leaseOf(tx, holder)))
+    .returning({ id: runs.id });
+  if (updated.length === 0)
+    throw new RigLostError(`another process has the rig of run ${write.runId} by now, so nothing is written into the run here`);
 }
+
+/** Looked at in the last statement of a commit: a process that was frozen meanwhile does not write into a run that another took up. */
+const leaseOf = (tx: Transaction, holder: string) =>
+  exists(
+    tx
+      .select({ one: sql`1` })
+      .from(rigLeases)
+      .where(and(eq(rigLeases.labId, runs.labId), eq(rigLeases.rigId, runs.rigId), eq(rigLeases.holder, holder))),
+  );
 
 /** The end of the chain after `events`; a gap or a wrong `prev` is refused before anything is written. */
 function followChain(from: ChainHead, events: readonly ChainedEvent[]): ChainHead {

@@ -36,7 +36,7 @@ export const runNowOf = ({ runId, state, reason, reasonCode, startedAtUtcMs, lou
 export interface RigNow {
   utcMs: number;
   run: RunNow | null;
-  /** Why an unfinished run could not be taken up; null where there is none. */
+  /** Why an unfinished run cannot be carried on; null where there is none. */
   quarantined: { runId: string; why: string } | null;
   link: Pick<LinkHealth, 'condition' | 'detail'>;
   /** The controller has answered since the line was opened. */

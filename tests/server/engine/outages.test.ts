@@ -209,6 +209,45 @@ describe('the database', () => {
     expect(await bench.journal.read()).not.toEqual([]);
   });
 
+  test.each(['at once', 'after an outage'])(
+    'what it refuses for good, %s, holds the run and is kept for the next process',
+    async (when) => {
+      const bench = await underWay(66, runStart({ ...shortProtocol, onInterruption: 'resume' }));
+      const refusal = Object.assign(new Error('value too long for type character varying(8)'), { code: '22001' });
+      if (when === 'after an outage') await away(bench);
+      bench.store.fault = () => {
+        throw refusal;
+      };
+      const answer = bench.driver.hold('Ben');
+      await bench.pass(15);
+      const [told, stoodAt, { writes }] = [bench.link.commands.length, bench.link.nowDeg(), bench.store];
+      await bench.pass(60);
+      expect([bench.link.commands.length, bench.link.nowDeg(), bench.store.writes]).toEqual([told, stoodAt, writes]);
+      expect(bench.errors).toEqual([refusal]);
+      expect([bench.driver.isOver(), answer.ok]).toEqual([true, true]);
+      expect(await bench.driver.resume('Ben')).toMatchObject({ ok: false });
+      bench.store.fault = () => 'none';
+      await bench.restart(5);
+      await bench.pass(60);
+      expect(bench.driver.facts().state).toBe('held');
+      expect(bench.store.kinds()).toContain('hold-requested');
+      expect(verifyChain(bench.store.events, sha256)).toMatchObject({ valid: true });
+    },
+  );
+
+  test('a resume that it refuses to save is answered', async () => {
+    const bench = await underWay(20);
+    bench.driver.hold('Ben');
+    await bench.pass(5);
+    bench.store.fault = () => {
+      throw new Error('null value in column "kind" violates not-null constraint');
+    };
+    const answer = bench.driver.resume('Ben');
+    await bench.pass(1);
+    expect(await answer).toMatchObject({ ok: false, why: expect.stringContaining('no longer drives the run') });
+    expect(sent(bench, 'move')).toHaveLength(1);
+  });
+
   test('a commit whose answer was lost is not made twice', async () => {
     const bench = makeBench();
     let n = 0;

@@ -10,6 +10,7 @@ import { RunDriver } from '@/server/engine/run-driver';
 import type { RunDriverParts } from '@/server/engine/run-driver-parts';
 import type { Arm, Effect } from '@/server/engine/run-context';
 import { VirtualClock } from '@/server/engine/virtual-clock';
+import { isPassing } from '@/server/store/failures';
 import { FakeLink } from './fake-link';
 
 /** A rig on a fake clock, a store in memory and a driver between them. */
@@ -59,7 +60,7 @@ export class MemoryStore implements RunStore {
   readonly rows = new Map<number, StepRow>();
   readonly events: ChainedEvent[] = [];
   writes = 0;
-  /** Asked before each commit: a returned error is thrown, `lost` is thrown after the write was made. */
+  /** Asked before each commit: `away` fails, `answer-lost` fails after the write was made, what it throws is the database's refusal. */
   fault: (write: RunWrite) => 'none' | 'away' | 'answer-lost' = () => 'none';
 
   constructor(private readonly start: RunStart) {}
@@ -132,6 +133,7 @@ export function makeBench(start: RunStart = runStart(), samples?: SampleReader):
     sha256,
     armNow: () => arm.now,
     perform: (effect) => performed.push(effect),
+    isPassing,
     onError: (error) => errors.push(error),
   });
   const bench: Bench = {

@@ -1,5 +1,6 @@
 import type { RunStart } from '@/shared/archive/run-records';
 import { verifyChain } from '@/shared/archive/chain';
+import { RigLostError } from '@/server/interfaces/run-store';
 import { type MemoryStore, sha256, shortProtocol } from './rig-bench';
 import { type Lab, makeLab, refusal } from './two-rigs';
 
@@ -84,6 +85,46 @@ test('a journal that the database refuses blocks its rig at once, with a sentenc
   expect(lab.quarantined).toMatchObject([{ start: { runId: start.runId }, why: expect.stringContaining('value too long') }]);
   expect(next.takenBy(start.rigId)).toMatch(/blocked by an unfinished run.*value too long.*Look at the rig, then end the run\.$/);
   expect(next.activeOf('south-bench')?.runId).toBe('run-2');
+});
+
+test('a run that the database refuses to save blocks its rig, with a sentence, until somebody ends it; no other run notices', async () => {
+  const lab = makeLab();
+  const supervisor = lab.newSupervisor();
+  const start = lab.make();
+  supervisor.startRun(start);
+  supervisor.startRun(lab.make({ runId: 'run-2', rigId: 'south-bench' }));
+  await lab.clock.advance(20_000);
+  (lab.runs.byId.get(start.runId) as MemoryStore).fault = () => {
+    throw Object.assign(new Error('Failed query: insert into …'), { cause: new Error('value too long for type character varying(8)') });
+  };
+  await lab.clock.advance(120_000);
+  expect(lab.quarantined).toMatchObject([{ start: { runId: start.runId }, why: expect.stringContaining('value too long') }]);
+  expect([supervisor.activeOf(start.rigId), lab.north.mayRenew()]).toEqual([null, false]);
+  expect(lab.north.commands.at(-1)).toMatchObject({ kind: 'hold' });
+  expect(refusal(() => supervisor.startRun(lab.make({ runId: 'run-3' })))).toMatchObject({
+    code: 'rig-busy',
+    message: expect.stringMatching(/The run broke off and the turntable was held: value too long.*Look at the rig, then end the run\.$/),
+  });
+  expect(lab.runs.byId.get('run-2')?.kinds().at(-1)).toBe('finished');
+  supervisor.release(start.rigId);
+  expect(supervisor.takenBy(start.rigId)).toBeNull();
+});
+
+test('a process that has lost the rig while it brings a journal in keeps the journal, and asks again until it is told', async () => {
+  const lab = makeLab();
+  const { start, store } = await leftInJournal(lab);
+  store.fault = () => {
+    throw new RigLostError('another process has the rig');
+  };
+  const next = lab.newSupervisor();
+  await next.recover();
+  await lab.clock.advance(3_000);
+  expect([next.activeOf(start.rigId), lab.quarantined]).toEqual([null, []]);
+  expect(await lab.journals.of(start).read()).not.toEqual([]);
+  store.fault = () => 'none';
+  await lab.clock.advance(8_000);
+  expect(next.activeOf(start.rigId)?.facts().state).toBe('held');
+  expect(await lab.journals.of(start).read()).toEqual([]);
 });
 
 test('a frozen process that writes once more, after another has taken its rig over, leaves no run without a driver', async () => {

@@ -1,6 +1,9 @@
 import { asc, eq } from 'drizzle-orm';
+import { connect } from '@/db/connect';
 import { runEvents, runSteps } from '@/db/schema';
-import { StaleRunError, type RunWrite } from '@/server/interfaces/run-store';
+import { RigLostError, StaleRunError, type RunWrite } from '@/server/interfaces/run-store';
+import { isPassing } from '@/server/store/failures';
+import { takeRigLease } from '@/server/store/rig-leases';
 import { createRunStore } from '@/server/store/run-store';
 import { appendEvent, emptyChain, verifyChain, type ChainHead } from '@/shared/archive/chain';
 import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
@@ -117,6 +120,40 @@ test('a writer that does not know the end of the chain is refused and writes not
   );
   expect(await db().select().from(runSteps).where(eq(runSteps.runId, start.runId))).toEqual([]);
   expect((await store.load(start.labId, start.runId))?.chain.seq).toBe(1);
+});
+
+test('a process whose rig another has taken over writes nothing more, however well it knows the end of the chain', async () => {
+  const start = await freshRun();
+  const { labId, rigId } = start;
+  const take = (holder: string, afterMs: number) =>
+    takeRigLease(db(), { labId, rigId, holder, nowUtcMs: eveningUtcMs + afterMs, untilUtcMs: eveningUtcMs + afterMs + 3000 });
+  const [frozen, next] = [createRunStore(db(), 'frozen'), createRunStore(db(), 'next')];
+  const [first, late] = [event(emptyChain), event(event(emptyChain), { late: true })];
+
+  expect(await take('frozen', 0)).toBe(1);
+  await frozen.commit(write(start, { events: [first] }));
+  await expect(next.commit(write(start, { expectedSeq: 1, events: [late] }))).rejects.toThrow(RigLostError);
+  expect(await take('next', 4000)).toBe(2);
+  await expect(frozen.commit(write(start, { expectedSeq: 1, events: [late], steps: [step(7)] }))).rejects.toThrow(
+    'another process has the rig',
+  );
+  expect(await db().$count(runSteps, eq(runSteps.runId, start.runId))).toBe(0);
+  expect((await next.load(labId, start.runId))?.chain).toEqual({ seq: 1, hash: first.hash });
+  await next.commit(write(start, { expectedSeq: 1, events: [event(first)] }));
+  await expect(frozen.commit(write(start, { expectedSeq: 1, events: [late] }))).rejects.toThrow(StaleRunError);
+  expect((await next.load(labId, start.runId))?.chain.seq).toBe(2);
+});
+
+test('a process that was frozen in the middle of a commit keeps the run locked for no longer than its connection may idle', async () => {
+  const start = await freshRun();
+  const frozen = connect({ url: database().url, maxConnections: 1, idleInTransactionMs: 50 });
+  const client = await frozen.pool.connect();
+  await client.query(`begin; select 1 from runs where id = '${start.runId}' for update`);
+  await createRunStore(db()).commit(write(start, { events: [event(emptyChain)] }));
+  const woken = await client.query('commit').catch((error: unknown) => error);
+  expect(isPassing(woken)).toBe(true);
+  client.release(true);
+  await frozen.close();
 });
 
 test('of two writers at once one wins', async () => {
