@@ -1,5 +1,6 @@
 import { readFileSync } from 'node:fs';
 import { median, robustMean } from '@/shared/statistics/robust';
+import { weightedMean } from '@/shared/statistics/weighted-mean';
 import { checkDataPath, relativeDifference } from '../../support/check-data';
 import { evaluateNight } from '../../support/evaluate-night';
 import { normalDeviates } from '../../support/lcg';
@@ -37,7 +38,7 @@ test('a pendulum that is knocked in the middle of a dwell swings otherwise from 
   expect(Math.abs((result.period_s?.value ?? NaN) - 420)).toBeLessThan(0.02);
 });
 
-test('the robust means of the 29 densities of 1798', () => {
+test('the means of the 29 densities of 1798', () => {
   const path = checkDataPath('cavendish1798.csv');
   if (path === null) return;
   const values = readFileSync(path, 'utf8')
@@ -46,6 +47,12 @@ test('the robust means of the 29 densities of 1798', () => {
     .slice(1)
     .map((line) => Number(line.split(',')[1]));
   expect(median(values)).toBe(5.46);
+  const spread = Math.sqrt(values.reduce((sum, value) => sum + (value - 5.447931034483) ** 2, 0) / 28);
+  expect(relativeDifference(spread, 0.2209456835376)).toBeLessThan(1e-11);
+  const plain = weightedMean(values.map((value) => ({ value, u: spread })));
+  expect(relativeDifference(plain.mean, 5.447931034483)).toBeLessThan(1e-12);
+  expect(relativeDifference(plain.u, 0.04102858342327)).toBeLessThan(1e-11);
+  expect(plain.birgeRatio).toBeCloseTo(1, 11);
   const found = robustMean(values);
   expect(relativeDifference(found.huber, 5.45753933344)).toBeLessThan(1e-9);
   expect(relativeDifference(found.biweight, 5.45566011276)).toBeLessThan(1e-9);

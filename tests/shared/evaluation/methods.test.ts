@@ -105,6 +105,14 @@ test.each([
   expect(relativeDifference(allanDeviation(sp1065Uniforms(1000), m), expected)).toBeLessThan(3e-7);
 });
 
+// The nine numbers of the small test set NBS-14, as quoted by public test suites.
+test.each([
+  [1, 91.22944974],
+  [2, 85.95286984],
+])('the overlapping Allan deviation of NBS-14 over %d', (m, expected) => {
+  expect(relativeDifference(allanDeviation([892, 809, 823, 798, 671, 644, 883, 903, 677], m), expected)).toBeLessThan(1e-9);
+});
+
 test('the Allan deviation of a straight drift is D m/√2', () => {
   const drift = Array.from({ length: 64 }, (_, k) => 1e-3 * k);
   expect(allanDeviation(drift, 10)).toBeCloseTo(7.0710678118655e-3, 14);

@@ -180,6 +180,11 @@ describe('noise', () => {
     expect(Math.sqrt((BOLTZMANN_J_K * 295.15) / kappa)).toBeCloseTo(2.796159705943e-7, 15);
     expect(rms(value) / 2.796159705943e-7).toBeGreaterThan(0.94);
     expect(rms(value) / 2.796159705943e-7).toBeLessThan(1.06);
+    // And of its means over 900 s: 4.48746475e-8 rad; 4,444 of them tell it to 1 %.
+    const means = Array.from({ length: Math.floor(value.length / 180) }, (_, k) => value.slice(180 * k, 180 * (k + 1)));
+    const scatter = rms(means.map((part) => part.reduce((sum, x) => sum + x, 0) / 180));
+    expect(scatter / 4.48746475e-8).toBeGreaterThan(0.95);
+    expect(scatter / 4.48746475e-8).toBeLessThan(1.05);
   });
 
   test('bursts come as often as asked and are as long as asked', () => {

@@ -46,6 +46,12 @@ test.each<[string, RigDocument, number, number, boolean]>([
   expect(relativeDifference((differenceU(rig, cadence) as number) / (2 * theta), expected)).toBeLessThan(0.03);
 });
 
+test('thermal noise alone: 38 nrad of the mean of 900 s (I1, long means)', () => {
+  const rig: RigDocument = { ...demoRigWide, noise: { temperature_K: 295.15 } };
+  const pair: Cadence = { dwells: 2, dwellS: 900, cycleS: 900, calibrated: true, rings: false };
+  expect(relativeDifference((differenceU(rig, pair) as number) / Math.SQRT2, 3.806453138e-8)).toBeLessThan(1e-6);
+});
+
 describe.each<[string, RigDocument]>([
   ['teaching', teaching],
   ['enthusiast', enthusiast],

@@ -54,6 +54,9 @@ describe('the weighted mean', () => {
     expect(rows).toHaveLength(16);
     // Q = 197.8399 is asserted in the tests of a published meta-analysis package.
     expect(relativeDifference(found.chiSquared, 197.839850347)).toBeLessThan(1e-9);
+    expect(relativeDifference(found.mean, 6.67428983821)).toBeLessThan(1e-11);
+    expect(relativeDifference(found.u, 3.758270097e-5)).toBeLessThan(1e-9);
+    expect(relativeDifference(found.birgeRatio as number, 3.631710803)).toBeLessThan(1e-9);
   });
 
   test('lets an exact value decide alone', () => {

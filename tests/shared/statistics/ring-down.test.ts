@@ -1,7 +1,7 @@
 import { abaDifference } from '@/shared/statistics/drift';
 import { cosine, offset, ringDownSegment, sine, slope } from '@/shared/statistics/ring-down';
 import { ringDownStart } from '@/shared/statistics/ring-down-start';
-import { at, bilinear } from '@/shared/statistics/symmetric';
+import { at, bilinear, invertSymmetric } from '@/shared/statistics/symmetric';
 import { fitSeparable, solveAtFixedAlpha, type SeparableFit } from '@/shared/statistics/variable-projection';
 import { relativeDifference } from '../../support/check-data';
 import { normalDeviates, sp1065Uniforms } from '../../support/lcg';
@@ -130,5 +130,24 @@ describe('the inflation of the variance of one centre by the other columns', () 
     const unitCovariance = fit.alphaCovariance.map((row) => row.map((value) => value / fit.variance));
     const shift = segment.shift[offset] as number[];
     expect(relativeDifference(alone + count * bilinear(shift, unitCovariance, shift), free)).toBeLessThan(1e-4);
+  });
+});
+
+describe('residuals that hang together', () => {
+  const tS = Float64Array.from({ length: 900 }, (_, k) => k);
+  const columns = ringDownSegment({ tS, y: tS }).basis([omega, gamma]).columns;
+  const inverse = invertSymmetric(columns.map((a) => columns.map((b) => a.reduce((sum, value, i) => sum + value * (b[i] as number), 0))));
+  /** How the centre is made of the data. */
+  const weights = tS.map((_, i) => columns.reduce((sum, column, k) => sum + at(inverse, offset, k) * (column[i] as number), 0));
+
+  // Autoregressive of the first order, 900 data of a second: (1 + ρ)/(1 − ρ) would be 3, 19 and 199.
+  test.each([
+    [0.5, 2.99631879],
+    [0.9, 18.8336395],
+    [0.99, 177.946792],
+  ])('with ρ = %d raise the variance of a centre by the published factor (C6)', (rho, factor) => {
+    const lagged = Float64Array.from(tS, (_, lag) => weights.reduce((sum, w, i) => sum + w * (weights[i + lag] ?? 0), 0));
+    const variance = lagged.reduce((sum, value, lag) => sum + (lag === 0 ? 1 : 2) * rho ** lag * value, 0);
+    expect(relativeDifference(variance / at(inverse, offset, offset), factor)).toBeLessThan(1e-8);
   });
 });
