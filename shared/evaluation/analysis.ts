@@ -3,7 +3,7 @@ import type { RingDownData } from '../statistics/ring-down';
 import { iterate } from './fit-rounds';
 import { ringDownStart, type RingDownStart } from '../statistics/ring-down-start';
 import { scaleOf, withZero, type ChannelScale } from './channel-scale';
-import { coarseOffsetS, fineOffset, type ClockOffset } from './clock-offset';
+import { coarseOffset, fineOffset, type ClockOffset } from './clock-offset';
 import { averagedAngles, reasonAgainstSamples, beginningOf, samplesIn, type DwellSamples } from './dwell-samples';
 import { dwellWindows, lengthS, type DwellWindow } from './dwell-windows';
 import { measuredOscillator, type FreeOscillator, type Known, type MeasuredOscillator } from './free-oscillator';
@@ -45,14 +45,19 @@ const cutShortPeriods = 1.25;
 export function analyse(archive: Archive, plan: EvaluationPlan): Analysis {
   const series = archive.readChannel(plan.channel);
   const first = analyseAt(archive, plan, { series, offsetS: 0, judge: false });
-  const coarseS = coarseOffsetS({ archive, ...first });
-  const wayOffS = coarseS !== null && Math.abs(coarseS) > greatestUnnoticedS ? coarseS : 0;
-  const near = wayOffS === 0 ? first : analyseAt(archive, plan, { series, offsetS: wayOffS, judge: false });
-  const foundS = wayOffS + (fineOffset({ archive, ...near })?.value ?? 0);
-  const offsetS = Math.abs(foundS) > guardedS ? foundS : 0;
+  const coarse = coarseOffset({ archive, ...first });
+  const wayOff = coarse !== null && Math.abs(coarse.value) > greatestUnnoticedS ? coarse : null;
+  const near = wayOff === null ? first : analyseAt(archive, plan, { series, offsetS: wayOff.value, judge: false });
+  const best = (at: typeof near, shiftS: number) => {
+    const fine = fineOffset({ archive, ...at });
+    const whole = fine === null ? null : { value: shiftS + fine.value, u: fine.u };
+    return whole === null || (wayOff !== null && wayOff.u < whole.u) ? wayOff : whole;
+  };
+  const found = best(near, wayOff?.value ?? 0);
+  const isTold = found !== null && Math.abs(found.value) > Math.max(2 * found.u, guardedS);
+  const offsetS = isTold ? found.value : 0;
   const last = analyseAt(archive, plan, { series, offsetS, judge: true, start: near.start });
-  const fine = fineOffset({ archive, ...last });
-  return { ...last, clockOffset: fine === null ? null : { value: offsetS + fine.value, u: fine.u } };
+  return { ...last, clockOffset: best(last, offsetS) };
 }
 
 /** A coarse offset below this may be none, s; the fine search finds it. */

@@ -37,12 +37,17 @@ function settingOf({ free, system, solution }: Fitted): PendulumSetting | null {
 }
 
 const columnsBeside = 4;
+/** Steps of a fortieth of a period. */
+const lagsEachWay = 10;
+/** A lag must fit better than none by this many variances of a datum: five standard deviations. */
+const leastGain = 25;
 
 /**
  * The coarse search: the record against the motion that the step log gives, lag by lag within a quarter of a period (beyond, the sign
- * is ambiguous), with offset, drift and the ringing from before the record left free. Null where there is nothing to compare.
+ * is ambiguous), with offset, drift and the ringing from before the record left free. Null where there is nothing to compare, or where
+ * no offset fits hardly worse: after shaped swings the record looks alike with any lag of some seconds.
  */
-export function coarseOffsetS(fitted: Fitted): number | null {
+export function coarseOffset(fitted: Fitted): ClockOffset | null {
   const setting = settingOf(fitted);
   const turntable = turntableOf(fitted.archive.steps, fitted.archive.rig);
   if (setting === null || turntable === null || fitted.segments.length < 2) return null;
@@ -55,15 +60,20 @@ export function coarseOffsetS(fitted: Fitted): number | null {
   const predicted = motionFrom(setting, turntable, { fromS, toS: (data.at(-1)?.atS ?? fromS) + periodS / 2, stepS });
   const used = data.filter(({ atS }) => atS > fromS + periodS / 4);
   if (used.length <= 2 * columnsBeside + 4) return null;
-  const lags = Array.from({ length: 21 }, (_, k) => ((k - 10) / 40) * periodS);
+  const lags = Array.from({ length: 2 * lagsEachWay + 1 }, (_, k) => (k - lagsEachWay) * stepS);
   const rest = lags.map((lagS) =>
     restAt(used, { lagS, fromS, periodS, gamma: setting.oscillator.gamma, motion: (atS) => predicted((atS - fromS) / stepS) }),
   );
   const best = rest.indexOf(Math.min(...rest));
+  const variance = (rest[best] as number) / (used.length - 2 * columnsBeside);
+  if (!((rest[lagsEachWay] as number) - (rest[best] as number) > leastGain * variance)) return null;
   const [before, here, after] = [rest[best - 1], rest[best], rest[best + 1]] as [number | undefined, number, number | undefined];
   const bend = before === undefined || after === undefined ? 0 : before - 2 * here + after;
   const shift = bend > 0 ? ((before as number) - (after as number)) / (2 * bend) : 0;
-  return ((best - 10 + shift) / 40) * periodS;
+  return {
+    value: (best - lagsEachWay + shift) * stepS,
+    u: Math.hypot(stepS / Math.sqrt(12), bend > 0 ? stepS * Math.sqrt((2 * variance) / bend) : 0),
+  };
 }
 
 /** The pendulum from rest on, as a function of the number of steps since the start (linear in between). */
@@ -123,7 +133,8 @@ const profileU = { known: 5e-4, guessed: 0.01 };
 
 /**
  * The fine search: the state at the end of each dwell, carried by the exact equation through the swing as the log times it, against the
- * state at the start of the next. Least squares over all swings; the uncertainty is their scatter. Null with fewer than three swings.
+ * state at the start of the next. Least squares over all swings; the uncertainty is their scatter, and never less than what they miss each
+ * other by: shaped swings leave the pendulum nearly at rest, whenever they began, and tell little. Null with fewer than three swings.
  */
 export function fineOffset(fitted: Fitted): ClockOffset | null {
   const setting = settingOf(fitted);
@@ -135,26 +146,50 @@ export function fineOffset(fitted: Fitted): ClockOffset | null {
     const end = carried(setting, passage, (atS) => turntable.angleRad((passage.epochS + atS - offsetS) * 1000));
     return [end.angleRad - passage.to.angleRad, (end.speedRadS - passage.to.speedRadS) / omega];
   };
+  const missedAll = (offsetS: number) => passages.map((passage) => missed(passage, offsetS));
   let offset = 0;
-  let u = Infinity;
+  let misses = missedAll(0);
+  const unmoved = sumOfSquares(misses);
+  let [step, weight, scatter] = [0, 0, 0];
   for (let round = 0; round < rounds; round += 1) {
-    const stepS = 0.05;
-    const each = passages.map((passage) => {
-      const [here, later] = [missed(passage, offset), missed(passage, offset + stepS)];
-      const slope = here.map((value, k) => ((later[k] as number) - value) / stepS) as [number, number];
+    const probeS = 0.05;
+    const later = missedAll(offset + probeS);
+    const each = misses.map((here, i) => {
+      const slope = here.map((value, k) => (((later[i] as number[])[k] as number) - value) / probeS) as [number, number];
       return { pull: slope[0] * here[0] + slope[1] * here[1], weight: slope[0] ** 2 + slope[1] ** 2 };
     });
-    const weight = each.reduce((sum, one) => sum + one.weight, 0);
+    weight = each.reduce((sum, one) => sum + one.weight, 0);
     if (!(weight > 0)) return null;
-    const step = -each.reduce((sum, one) => sum + one.pull, 0) / weight;
-    const scatter = scatterOf(each.map((one) => one.pull + one.weight * step));
+    const wanted = -each.reduce((sum, one) => sum + one.pull, 0) / weight;
+    scatter = scatterOf(each.map((one) => one.pull + one.weight * wanted));
+    [step, misses] = downhill(wanted, misses, (s) => missedAll(offset + s));
     offset += step;
-    u = Math.sqrt((scatter * each.length) / (each.length - 1)) / weight;
     if (Math.abs(step) < 1e-6) break;
   }
-  return Number.isFinite(offset)
-    ? { value: offset, u: Math.hypot(u, profileU[fitted.archive.rig.motion === undefined ? 'guessed' : 'known'], logU(fitted)) }
-    : null;
+  if (!Number.isFinite(offset)) return null;
+  const count = passages.length;
+  const variance = sumOfSquares(misses) / (2 * count - 1);
+  const gain = unmoved - sumOfSquares(misses);
+  const u = Math.max(
+    Math.sqrt((scatter * count) / (count - 1)) / weight,
+    Math.sqrt(variance / weight),
+    // Where the misfit is no parabola: how much worse no offset fits.
+    offset === 0 ? 0 : Math.abs(offset) * Math.sqrt(variance / gain),
+  );
+  return { value: offset, u: Math.hypot(u, profileU[fitted.archive.rig.motion === undefined ? 'guessed' : 'known'], logU(fitted)) };
+}
+
+type Misses = [number, number][];
+
+const sumOfSquares = (misses: Misses) => misses.reduce((sum, [a, b]) => sum + a * a + b * b, 0);
+
+/** As much of the wanted step as lessens the misfit, and the misfit there; none where nothing does. */
+function downhill(wanted: number, misses: Misses, missedAfter: (stepS: number) => Misses): [number, Misses] {
+  for (let share = 1; share > 0.01; share /= 2) {
+    const next = missedAfter(share * wanted);
+    if (sumOfSquares(next) < sumOfSquares(misses)) return [share * wanted, next];
+  }
+  return [0, misses];
 }
 
 /** Sum of squares, neighbours included where they add: a dwell's error shows in the swing before it and in the one after. */

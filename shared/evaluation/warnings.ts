@@ -93,14 +93,24 @@ function oscillatorWarnings(free: Analysis['free']): ArchiveWarning[] {
 
 /** Smaller offsets are common and do no harm, s. */
 const greatestClockS = 0.01;
+/** So far the guards about the swings cover an offset, s. */
+const harmlessClockS = 1;
 
 function clockWarnings(offset: Analysis['clockOffset']): ArchiveWarning[] {
-  if (offset === null || Math.abs(offset.value) <= Math.max(2 * offset.u, greatestClockS)) return [];
-  const way = offset.value > 0 ? 'later' : 'earlier';
-  return [
-    {
+  if (offset === null) return [];
+  const warnings: ArchiveWarning[] = [];
+  const way = `${Math.abs(offset.value).toFixed(3)} s ${offset.value > 0 ? 'later' : 'earlier'}`;
+  if (Math.abs(offset.value) > Math.max(2 * offset.u, greatestClockS)) {
+    warnings.push({
       code: 'clock-offset',
-      message: `The channel's clock shows ${Math.abs(offset.value).toFixed(3)} s ${way} than the step log's (u ${offset.u.toFixed(3)} s); this was taken off.`,
-    },
-  ];
+      message: `The channel's clock shows ${way} than the step log's (u ${offset.u.toFixed(3)} s); this was taken off.`,
+    });
+  }
+  if (2 * offset.u > harmlessClockS) {
+    warnings.push({
+      code: 'clock-poorly-known',
+      message: `How the channel's clock stands against the step log's is poorly known: u ${offset.u.toFixed(1)} s. Shaped swings leave the pendulum nearly still, so the record hardly shows when they were. Up to ${harmlessClockS} s do no harm to G; if the clocks may differ by more, set them alike, or begin the night with three plain swings.`,
+    });
+  }
+  return warnings;
 }

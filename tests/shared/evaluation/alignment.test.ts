@@ -59,3 +59,46 @@ test('a still night tells no offset', () => {
   })).result;
   expect(alignment).toEqual({ clockOffset_s: null, applied: false });
 });
+
+describe('swings in two moves, which leave the pendulum nearly at rest', () => {
+  const twoMoves: NightPlan['shaped'] = (fromDeg) => ({ viaDeg: fromDeg < 0 ? 1.094 : -1.094, afterS: 210.9 });
+  const shaped: NightPlan = { ...wide, dwellS: 630, channelLateS: 3, shaped: twoMoves };
+  const noisy = (plan: NightPlan) => {
+    const normal = normalDeviates(23);
+    const { alignment, warnings } = evaluated({ ...plan, reading: (angle) => angle + 2e-5 * normal() });
+    return {
+      ...(alignment?.clockOffset_s ?? { value: NaN, u: NaN }),
+      applied: alignment?.applied,
+      codes: warnings.map(({ code }) => code),
+    };
+  };
+
+  test('tell the clock poorly: the result says so and takes nothing off', () => {
+    const { value, u, applied, codes } = noisy(shaped);
+    expect(u).toBeGreaterThan(1);
+    expect(Math.abs(value - 3)).toBeLessThan(3 * u);
+    expect(applied).toBe(false);
+    expect(codes).toContain('clock-poorly-known');
+    expect(codes).not.toContain('clock-offset');
+  });
+
+  test('after three plain ones tell it well', () => {
+    let swings = 0;
+    const plainS = 9.73;
+    const mixed: NightPlan['shaped'] = (fromDeg, toDeg) => {
+      swings += 1;
+      return swings <= 3 ? { viaDeg: toDeg, afterS: plainS } : twoMoves(fromDeg, toDeg);
+    };
+    const { value, u, applied, codes } = noisy({ ...shaped, shaped: mixed });
+    expect(u).toBeLessThan(0.2);
+    expect(Math.abs(value - 3)).toBeLessThan(4 * u);
+    expect(applied).toBe(true);
+    expect(codes).not.toContain('clock-poorly-known');
+  });
+
+  test('without noise tell it as well as plain ones', () => {
+    const { alignment, warnings } = evaluated(shaped);
+    expect(alignment?.clockOffset_s?.value).toBeCloseTo(3, 2);
+    expect(warnings.map(({ code }) => code)).not.toContain('clock-poorly-known');
+  });
+});
