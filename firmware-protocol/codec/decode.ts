@@ -17,8 +17,9 @@ export function decodeLine(line: string): Item {
   const text = line.charCodeAt(line.length - 1) === 13 ? line.slice(0, -1) : line;
   if (text.length === 0) return BLANK;
   if (text.length > MAX_LINE_BYTES - 1) return garbage('length', line);
+  const alphabet = ALPHABET;
   for (let index = 0; index < text.length; index += 1) {
-    if (ALPHABET[text.charCodeAt(index)] !== 1) return garbage('alphabet', line);
+    if (alphabet[text.charCodeAt(index)] !== 1) return garbage('alphabet', line);
   }
   const bodyLength = text.length - CHECK_LENGTH;
   const check = hexNumberField(text.slice(bodyLength + 1), 4);

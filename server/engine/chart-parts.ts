@@ -42,17 +42,22 @@ import { chooseNext, standingEndUtcMs } from './steps';
 
 /** What the run's chart is put together from: actions, guards and the transitions that several states share. */
 
-interface ChartContext {
+export interface ChartContext {
   start: RunStart;
   run: RunContext;
   out: Output;
+}
+
+export interface ChartInput {
+  start: RunStart;
+  nowUtcMs: number;
 }
 
 export type Told = { context: ChartContext; event: RunEvent };
 type Writer = (draft: Draft) => void;
 
 export const chart = setup({
-  types: { context: {} as ChartContext, events: {} as RunEvent, input: {} as { start: RunStart; nowUtcMs: number } },
+  types: { context: {} as ChartContext, events: {} as RunEvent, input: {} as ChartInput },
 });
 
 const draftOf = ({ context, event }: Told) => new Draft(context.start, event, { context: context.run, out: context.out });

@@ -1,5 +1,6 @@
 import type { RunStart, StepOutcome, StepRow } from '@/shared/archive/run-records';
 import type { Instant } from '../interfaces/clock';
+import { copied } from './copied';
 import type { LinkCommand } from '../interfaces/turntable-link';
 import { noteVerdict } from './verdict';
 import type { Look } from './look';
@@ -49,7 +50,7 @@ export class Draft {
     from: { context: RunContext; out: Output; predictedEndUtcMs?: number | null },
   ) {
     this.predictedEndUtcMs = from.predictedEndUtcMs ?? null;
-    this.context = structuredClone(from.context);
+    this.context = copied(from.context);
     this.out = { steps: [...from.out.steps], events: [...from.out.events], effects: [...from.out.effects] };
   }
 

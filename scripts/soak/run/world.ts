@@ -51,8 +51,9 @@ export class SimulatedStore implements RunStore {
     this.onCommit('before');
     if (this.away) throw databaseAway();
     if (this.head().seq !== write.expectedSeq) throw new StaleRunError(`the chain ends at ${this.head().seq}`);
-    this.events.push(...structuredClone(write.events));
-    for (const row of structuredClone(write.steps)) this.rows.set(row.seq, row);
+    const { events, steps } = JSON.parse(JSON.stringify({ events: write.events, steps: write.steps })) as RunWrite;
+    this.events.push(...events);
+    for (const row of steps) this.rows.set(row.seq, row);
     this.stored = JSON.stringify({ snapshot: write.snapshot, chartVersion: write.chartVersion });
     this.onCommit('after');
     if (this.loseAnswers === 0) return;
@@ -78,6 +79,9 @@ class SteppingClock implements Clock {
   utcMs = () => this.clock.utcMs() + this.stepMs;
   after = (delayMs: number, task: () => void) => this.clock.after(delayMs, task);
 }
+
+/** Most lines ask or tell something else; those need not be read. */
+const ordersMotion = / (home|move|nudge) /;
 
 /** What a night left behind, for the checkers; times are true ones, ms since the beginning. */
 export interface Witness {
@@ -288,6 +292,7 @@ export class World {
   }
 
   private noteArrived(line: string): void {
+    if (!ordersMotion.test(line)) return;
     const item = decodeLine(line);
     if (item.kind !== 'request' || !('tag' in item.order)) return;
     const { tag } = item.order;
@@ -297,6 +302,7 @@ export class World {
   private readonly seen = new Set<string>();
 
   private noteSent(line: string): void {
+    if (!line.includes(' began ')) return;
     const item = decodeLine(line.trimEnd());
     if (item.kind !== 'event') return;
     // An event that is read again, as by the next process, is the same event; numbers and times begin anew with each reset.
