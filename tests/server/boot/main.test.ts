@@ -68,12 +68,10 @@ test.each(['SIGTERM', 'SIGINT'] as const)('migrates, seeds, says where it listen
   });
   expect(rigs.status).toBe(200);
 
-  const askedMs = performance.now();
   child.kill(signal);
   const [code] = (await once(child, 'close')) as [number];
   const serious = complaints()
     .split('\n')
     .filter((line) => /"level":(40|50|60)/.test(line));
   expect({ code, serious }).toEqual({ code: 0, serious: [] });
-  expect(performance.now() - askedMs).toBeLessThan(10_000);
 });
