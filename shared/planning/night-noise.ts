@@ -62,15 +62,30 @@ export function differenceU(rig: RigDocument, cadence: Cadence): number | null {
   const { inertiaKgM2, gamma, kappa } = oscillator;
   const white = (inflation(oscillator, dwellS, cadence) * readout ** 2) / (usualRateHz * dwellS);
   const thermal = (8 * BOLTZMANN_J_K * temperature * inertiaKgM2 * gamma) / (kappa * kappa) / (2 * dwellS);
-  const wandering = (walk ** 2 / 60) * ((3 * cycleS - 2 * dwellS) / 12);
-  return 2 * Math.sqrt(((white + thermal) * driftCost(dwells) + wandering) / dwells);
+  const weights = weightsOf(dwells);
+  const squares = weights.reduce((sum, w) => sum + w * w, 0);
+  return Math.sqrt((white + thermal) * squares + (walk ** 2 / 60) * wanderingS(weights, { dwellS, cycleS }));
 }
 
-/** What ABA windows cost against a plain difference (physics.md D2). */
-function driftCost(dwells: number): number {
-  if (dwells < 3) return 1;
+/** What near minus far is made of, dwell by dwell: ABA windows, a plain difference of two. */
+function weightsOf(dwells: number): number[] {
   const series = Array.from({ length: dwells }, (_, k) => ({ timeS: k, side: k % 2 === 0 ? (1 as const) : (-1 as const), value: 0 }));
-  return (dwells * abaDifference(series).weights.reduce((sum, w) => sum + w * w, 0)) / 4;
+  return dwells < 3 ? [1, -1] : abaDifference(series).weights;
+}
+
+/**
+ * Variance of the weighted sum of dwell means of a random walk that gains a variance of 1 a second, s: the square of what each instant's
+ * step weighs, over the night. For many dwells it comes to (3 t_c − 2 t_d)/3 over their number (physics.md J1).
+ */
+function wanderingS(weights: readonly number[], { dwellS, cycleS }: Pick<Cadence, 'dwellS' | 'cycleS'>): number {
+  let before = weights.reduce((sum, w) => sum + w, 0);
+  let variance = 0;
+  for (const w of weights) {
+    const after = before - w;
+    variance += (dwellS * (before * before + before * after + after * after)) / 3 + (cycleS - dwellS) * after * after;
+    before = after;
+  }
+  return variance;
 }
 
 /** Standard uncertainties of ω (rad/s) and γ (1/s) that the ringing of the night itself gives; null where there is none. */

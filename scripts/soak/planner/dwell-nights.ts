@@ -1,0 +1,122 @@
+import { oscillatorOf, type Oscillator } from '@/shared/physics/oscillator';
+import { seededStreams, type GaussianSource } from '@/shared/physics/seeded-gaussian';
+import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
+import type { RigDocument } from '@/shared/rig/document';
+import { differenceU, type Cadence } from '@/shared/planning/night-noise';
+import type { Alternative } from '@/shared/planning/strategies';
+import { abaDifference } from '@/shared/statistics/drift';
+import { offset, ringDownSegment } from '@/shared/statistics/ring-down';
+import { fitSeparable, type SeparableSegment } from '@/shared/statistics/variable-projection';
+
+/**
+ * Nights at the level of dwells, to hold the planner against: readings with white noise and a wandering zero, the ringing that the strategy
+ * leaves, one ring-down after a kick; fitted with a shared period and decay as the evaluation does, near minus far by ABA windows.
+ */
+
+const nightS = 12 * 3600;
+const moveS = 10;
+const rateHz = 10;
+/** Readings are averaged over a twenty-fourth of the period. */
+const binsPerPeriod = 24;
+/** The calibration of practice: ten periods after a kick of 5 mrad. */
+const ringDown = { periods: 10, amplitudeRad: 5e-3 };
+const signalRad = 2e-3;
+/** Ringing at the start of a dwell as a share of the step. */
+const ringing: Record<Alternative['strategy'], number> = { plain: 0.65, shaped: 0.01, wait: 0.01 };
+
+const withNoise = (rig: RigDocument, readout: number, walk: number): RigDocument => ({
+  ...rig,
+  noise: { readout_rad: readout, walk_rad_per_sqrt_min: walk },
+});
+
+/** A teaching rig, an enthusiast's (physics.md J3), and a slow quiet one that the readout limits. */
+export const plannedRigs: Record<string, RigDocument> = {
+  teaching: withNoise(demoRigWide, 2e-5 * Math.sqrt(rateHz), 3e-6),
+  enthusiast: withNoise(demoRigNarrow, 5e-6, 1e-6),
+  slow: withNoise(
+    {
+      ...demoRigWide,
+      measured: { ...demoRigWide.measured, period_s: { value: 900, u: 0.1, unit: 's' }, decayTime_s: { value: 1500, u: 10, unit: 's' } },
+    },
+    3e-5,
+    5e-8,
+  ),
+};
+
+export interface Planned {
+  rig: string;
+  strategy: Alternative['strategy'];
+  dwells: number;
+  /** Scatter of near minus far over the simulated nights by the planned uncertainty. */
+  ratio: number;
+}
+
+/** Whole periods from swing to swing, or one period of calm after waiting until the ringing has died to a hundredth. */
+function cadenceOf({ periodS, gamma }: Oscillator, strategy: Planned['strategy']): Cadence {
+  const dead = { plain: moveS, shaped: moveS + periodS / 2, wait: moveS + Math.log(100) / gamma }[strategy];
+  const cycleS = { plain: periodS, shaped: 2 * periodS, wait: dead + periodS }[strategy];
+  return { dwells: Math.floor(nightS / cycleS), dwellS: cycleS - dead, cycleS, calibrated: true, rings: strategy === 'plain' };
+}
+
+/** Every strategy on every rig with so many simulated nights of twelve hours. */
+export function heldAgainstPlan(nights: number): Planned[] {
+  let seed = 0;
+  return Object.entries(plannedRigs).flatMap(([name, rig]) => {
+    const oscillator = oscillatorOf(rig) as Oscillator;
+    return (Object.keys(ringing) as Planned['strategy'][]).map((strategy) => {
+      const cadence = cadenceOf(oscillator, strategy);
+      const found = Array.from({ length: nights }, () =>
+        difference(rig, { oscillator, cadence, ringing: ringing[strategy], seed: (seed += 1) }),
+      );
+      const scatter = Math.sqrt(found.reduce((sum, value) => sum + (value - signalRad) ** 2, 0) / nights);
+      return { rig: name, strategy, dwells: cadence.dwells, ratio: scatter / (differenceU(rig, cadence) as number) };
+    });
+  });
+}
+
+/** Of the ratios: how far the plan is off on the whole. */
+export const geometricMean = (planned: readonly Planned[]) =>
+  Math.exp(planned.reduce((sum, { ratio }) => sum + Math.log(ratio), 0) / planned.length);
+
+interface Night {
+  oscillator: Oscillator;
+  cadence: Cadence;
+  ringing: number;
+  seed: number;
+}
+
+/** Near minus far of one night, rad. */
+function difference(rig: RigDocument, night: Night): number {
+  const { omegaD, gamma, periodS } = night.oscillator;
+  const { dwells, dwellS, cycleS } = night.cadence;
+  const [white, walk] = seededStreams(night.seed, 2) as [GaussianSource, GaussianSource];
+  // Neighbouring seeds begin alike; after a while the generator has forgotten that.
+  for (let k = 0; k < 200; k += 1) [white.next(), walk.next()];
+  let zero = 0;
+  const wander = (spanS: number) => (zero += (rig.noise?.walk_rad_per_sqrt_min ?? 0) * Math.sqrt(spanS / 60) * walk.next());
+  const stretch = (lengthS: number, restRad: number, amplitudeRad: number): SeparableSegment => {
+    const count = Math.round((lengthS / periodS) * binsPerPeriod);
+    const binS = lengthS / count;
+    const datumU = (rig.noise?.readout_rad ?? 0) / Math.sqrt(rateHz * binS);
+    const tS = Float64Array.from({ length: count }, (_, k) => (k + 0.5) * binS);
+    const y = tS.map((t) => {
+      const wandered = (wander(binS / 2) + wander(binS / 2)) / 2;
+      return restRad + wandered + amplitudeRad * Math.exp(-gamma * t) * Math.cos(omegaD * t) + datumU * white.next();
+    });
+    return ringDownSegment({ tS, y });
+  };
+  const calibration = stretch(ringDown.periods * periodS, 0, ringDown.amplitudeRad);
+  const segments = Array.from({ length: dwells }, (_, k) => {
+    wander(cycleS - dwellS);
+    const side = k % 2 === 0 ? 1 : -1;
+    return stretch(dwellS, (side * signalRad) / 2, -side * night.ringing * signalRad);
+  });
+  const fit = fitSeparable([calibration, ...segments], [omegaD, gamma]);
+  return abaDifference(
+    fit.segments.slice(1).map(({ coefficients }, k) => ({
+      timeS: k * cycleS,
+      side: k % 2 === 0 ? (1 as const) : (-1 as const),
+      value: coefficients[offset] as number,
+    })),
+  ).value;
+}
