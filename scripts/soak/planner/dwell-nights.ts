@@ -91,7 +91,7 @@ function difference(rig: RigDocument, night: Night): number {
   const { dwells, dwellS, cycleS } = night.cadence;
   const [white, walk] = seededStreams(night.seed, 2) as [GaussianSource, GaussianSource];
   // Neighbouring seeds begin alike; after a while the generator has forgotten that.
-  for (let k = 0; k < 200; k += 1) [white.next(), walk.next()];
+  for (const stream of [white, walk]) for (let k = 0; k < 200; k += 1) stream.next();
   let zero = 0;
   const wander = (spanS: number) => (zero += (rig.noise?.walk_rad_per_sqrt_min ?? 0) * Math.sqrt(spanS / 60) * walk.next());
   const stretch = (lengthS: number, restRad: number, amplitudeRad: number): SeparableSegment => {
