@@ -4,32 +4,35 @@ import { View } from 'react-native';
 import { addressOf, useLab, useLabQuery, wordsOf } from '@/components/api';
 import { ReversalPlot } from '@/components/charts';
 import { DownloadLink } from '@/components/runs/download-link';
-import { Body, Icon, Label, Loading, Panel, ProblemNotice, Screen, Section, useWide } from '@/components/ui';
-import type { EvaluationView } from '@/shared/contracts/evaluations';
+import { Body, Icon, Label, Loading, Panel, ProblemNotice, Screen, Section, Select, useWide } from '@/components/ui';
+import type { EvaluationView, ListedEvaluation } from '@/shared/contracts/evaluations';
 import { downloadArchive, getRun, type RunView } from '@/shared/contracts/runs';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { formatDayAndClock } from '@/shared/lib/format-time';
 import { BudgetPanel } from './budget-panel';
 import { DwellList } from './dwell-list';
 import { EvaluatePanel } from './evaluate-panel';
-import { registeredWords } from './evaluation-words';
+import { registeredWords, softwareWords } from './evaluation-words';
 import { FiguresPanel } from './figures-panel';
 import { FitPanel } from './fit-panel';
+import { FreezePanel } from './freeze-panel';
 import { GPanel } from './g-panel';
 import { useEvaluation, useEvaluations } from './use-evaluations';
 
-/** The newest evaluation of a run: G, how well it is known and why, and everything it was made from. */
+/** The newest evaluation of a run, or an older one that is chosen: G, how well it is known and why, and everything it was made from. */
 export function EvaluationScreen() {
   const { runId } = useLocalSearchParams<{ runId: string }>();
   const run = useLabQuery(getRun, { params: { runId } });
   const evaluations = useEvaluations(runId);
-  const full = useEvaluation(evaluations.done?.id ?? null);
+  const [chosen, setChosen] = useState<string | null>(null);
+  const listed = evaluations.allDone.find(({ id }) => id === chosen) ?? evaluations.done;
+  const full = useEvaluation(listed?.id ?? null);
   const view = run.data?.data ?? null;
   const failed = run.error ?? evaluations.list.error;
   const evaluation = full.data?.data ?? null;
   const panel = <EvaluatePanel runId={runId} evaluations={evaluations} registeredChannel={view?.protocol.evaluation?.channel ?? null} />;
   const back = { href: `/runs/${runId}` as Href, label: 'the run' };
-  if (evaluation === null || evaluation.result === null || view === null) {
+  if (evaluation === null || evaluation.result === null || view === null || listed === null) {
     return (
       <Screen title="Evaluation" back={back}>
         {failed !== null ? (
@@ -42,7 +45,18 @@ export function EvaluationScreen() {
       </Screen>
     );
   }
-  return <Evaluated view={view} evaluation={evaluation} result={evaluation.result} panel={panel} back={back} />;
+  return (
+    <Evaluated
+      key={listed.id}
+      view={view}
+      evaluation={evaluation}
+      result={evaluation.result}
+      panel={panel}
+      back={back}
+      choice={<Choice evaluations={evaluations.allDone} shown={listed.id} onChoose={setChosen} />}
+      freeze={<FreezePanel evaluation={listed} recomputation={evaluations.recomputationOf(listed.id)} onChanged={evaluations.refresh} />}
+    />
+  );
 }
 
 interface EvaluatedProps {
@@ -51,9 +65,11 @@ interface EvaluatedProps {
   result: EvaluationResult;
   panel: React.ReactNode;
   back: { href: Href; label: string };
+  choice: React.ReactNode;
+  freeze: React.ReactNode;
 }
 
-function Evaluated({ view, evaluation, result, panel, back }: EvaluatedProps) {
+function Evaluated({ view, evaluation, result, panel, back, choice, freeze }: EvaluatedProps) {
   const { labId, timeZone } = useLab();
   const wide = useWide();
   const curves = evaluation.curves ?? [];
@@ -73,6 +89,7 @@ function Evaluated({ view, evaluation, result, panel, back }: EvaluatedProps) {
         </>
       }
     >
+      {choice}
       <GPanel
         result={result}
         heading={view.rehearsal ? 'G of a rehearsal' : 'G of this run'}
@@ -99,11 +116,30 @@ function Evaluated({ view, evaluation, result, panel, back }: EvaluatedProps) {
       </View>
       <Label>
         Evaluated {formatDayAndClock(Date.parse(evaluation.createdAt), timeZone)} by {evaluation.createdBy}
-        {evaluation.channel === null ? '' : `, channel ${evaluation.channel}`}. Whoever has the archive can compute this again.
+        {evaluation.channel === null ? '' : `, channel ${evaluation.channel}`}. {softwareWords(evaluation.software)}. Whoever has the
+        archive can compute this again.
       </Label>
+      {freeze}
       {panel}
     </Screen>
   );
+}
+
+interface ChoiceProps {
+  evaluations: readonly ListedEvaluation[];
+  shown: string;
+  onChoose: (id: string) => void;
+}
+
+/** Which evaluation is shown, where the run has more than one. */
+function Choice({ evaluations, shown, onChoose }: ChoiceProps) {
+  const { timeZone } = useLab();
+  if (evaluations.length < 2) return null;
+  const options = evaluations.map(({ id, createdAt, createdBy, frozen }) => ({
+    value: id,
+    label: `${formatDayAndClock(Date.parse(createdAt), timeZone)} by ${createdBy}${frozen === null ? '' : ', frozen'}`,
+  }));
+  return <Select label="Evaluation" value={shown} options={options} onChange={onChoose} testID="which-evaluation" />;
 }
 
 function Warnings({ warnings }: { warnings: EvaluationResult['warnings'] }) {

@@ -30,6 +30,9 @@ export function registeredWords(
   return { words: `not as registered${differences.length === 0 ? '' : `: ${differences.join('; ')}`}`, differs: true };
 }
 
+export const softwareWords = (version: string | null): string =>
+  version === null ? 'The version of the software was not kept' : `Software Evenfall ${version}`;
+
 const knownUnits: Record<string, string> = { reversal_rad: 'rad', period_s: 's', decayTime_s: 's' };
 
 /** Unit of a budget line: that of the rig's quantity at the path. */

@@ -150,6 +150,13 @@ export const evaluations = pgTable(
     error: text('error'),
     result: json('result').$type<EvaluationResult>(),
     curves: json('curves').$type<FitCurve[]>(),
+    /** Version of the software that computed the result; null before it ends, and where none was kept. */
+    software: text('software'),
+    /** The frozen evaluation that this one computes again. */
+    recomputes: key('recomputes'),
+    frozenAt: instant('frozen_at'),
+    frozenBy: text('frozen_by'),
+    frozenReason: text('frozen_reason'),
   },
   (table) => [
     primaryKey({ columns: [table.labId, table.id] }),

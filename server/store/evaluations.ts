@@ -1,4 +1,4 @@
-import { and, desc, eq, inArray } from 'drizzle-orm';
+import { and, desc, eq, inArray, isNull } from 'drizzle-orm';
 import { evaluations } from '@/db/schema';
 import type { EvaluationResult, FitCurve } from '@/shared/evaluation/result';
 import { one, type Handle, type Transaction } from './database';
@@ -17,7 +17,7 @@ export interface EvaluationJob {
 /** Adds an evaluation and the job that works it off, both or neither. */
 export async function queueEvaluation(
   tx: Transaction,
-  evaluation: { labId: string; runId: string; channel: string | null; createdAt: number; createdBy: string },
+  evaluation: { labId: string; runId: string; channel: string | null; createdAt: number; createdBy: string; recomputes?: string },
 ): Promise<EvaluationRecord> {
   const row = one(
     await tx
@@ -50,6 +50,11 @@ const listColumns = {
   finishedAt: evaluations.finishedAt,
   error: evaluations.error,
   result: evaluations.result,
+  software: evaluations.software,
+  recomputes: evaluations.recomputes,
+  frozenAt: evaluations.frozenAt,
+  frozenBy: evaluations.frozenBy,
+  frozenReason: evaluations.frozenReason,
 };
 
 export async function findEvaluation(db: Handle, labId: string, evaluationId: string): Promise<EvaluationRecord | null> {
@@ -71,7 +76,7 @@ export async function beginEvaluation(db: Handle, job: EvaluationJob): Promise<E
   return row ?? null;
 }
 
-export type EvaluationEnd = { result: EvaluationResult; curves: FitCurve[]; channel: string | null } | { error: string };
+export type EvaluationEnd = { result: EvaluationResult; curves: FitCurve[]; channel: string | null; software: string } | { error: string };
 
 export async function endEvaluation(db: Handle, job: EvaluationJob, end: EvaluationEnd & { finishedAt: number }): Promise<void> {
   const state = 'error' in end ? 'failed' : 'done';
@@ -79,4 +84,18 @@ export async function endEvaluation(db: Handle, job: EvaluationJob, end: Evaluat
     .update(evaluations)
     .set({ ...end, state })
     .where(and(eq(evaluations.labId, job.labId), eq(evaluations.id, job.evaluationId)));
+}
+
+/** Freezes an evaluation that came to a result, for good; null where it has none, is frozen already or computes another again. */
+export async function freezeEvaluation(
+  db: Handle,
+  { labId, evaluationId, ...frozen }: EvaluationJob & { frozenAt: number; frozenBy: string; frozenReason: string },
+): Promise<EvaluationRecord | null> {
+  const open = and(eq(evaluations.state, 'done'), isNull(evaluations.frozenAt), isNull(evaluations.recomputes));
+  const [row] = await db
+    .update(evaluations)
+    .set(frozen)
+    .where(and(eq(evaluations.labId, labId), eq(evaluations.id, evaluationId), open))
+    .returning();
+  return row ?? null;
 }

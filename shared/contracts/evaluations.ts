@@ -13,8 +13,15 @@ export const evaluationViewSchema = z.strictObject({
   error: z.string().nullable(),
   result: evaluationResultSchema.nullable(),
   curves: z.array(fitCurveSchema).nullable(),
+  /** Version of the software that computed the result; null where none was kept. */
+  software: z.string().nullable(),
+  /** The frozen evaluation that this one computes again. */
+  recomputes: idSchema.nullable(),
+  /** Who keeps it as it is, since when and why; there is no way back. */
+  frozen: z.strictObject({ at: instantSchema, by: z.string(), reason: z.string() }).nullable(),
 });
 export type EvaluationView = z.infer<typeof evaluationViewSchema>;
+export type ListedEvaluation = Omit<EvaluationView, 'curves'>;
 
 export const startEvaluation = defineRoute({
   name: 'startEvaluation',
@@ -47,4 +54,27 @@ export const getEvaluation = defineRoute({
   status: 200,
   response: evaluationViewSchema,
   problems: ['not-found'],
+});
+export const freezeEvaluation = defineRoute({
+  name: 'freezeEvaluation',
+  summary: 'Freeze an evaluation for good, with a reason',
+  method: 'POST',
+  path: '/labs/:labId/evaluations/:evaluationId/freeze',
+  access: 'evaluate',
+  status: 200,
+  idempotent: true,
+  body: z.strictObject({ reason: z.string().trim().min(3, 'say why').max(500) }),
+  response: evaluationViewSchema,
+  problems: ['invalid-input', 'not-found', 'not-possible-now'],
+});
+export const recomputeEvaluation = defineRoute({
+  name: 'recomputeEvaluation',
+  summary: 'Compute a frozen evaluation again, from the run as it stands, to be compared with it',
+  method: 'POST',
+  path: '/labs/:labId/evaluations/:evaluationId/recomputations',
+  access: 'evaluate',
+  status: 202,
+  idempotent: true,
+  response: evaluationViewSchema,
+  problems: ['not-found', 'not-possible-now'],
 });

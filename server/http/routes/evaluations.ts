@@ -1,5 +1,6 @@
 import * as contracts from '@/shared/contracts/evaluations';
-import type { EvaluationView } from '@/shared/contracts/evaluations';
+import type { EvaluationView, ListedEvaluation } from '@/shared/contracts/evaluations';
+import type { Handle } from '@/server/store/database';
 import * as store from '@/server/store/evaluations';
 import { channelsOfRun, countSamples, findRun, type RunRecord } from '@/server/store/runs-read';
 import { assertEnded } from '../archive-input';
@@ -9,7 +10,7 @@ import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
 import type { Services } from '../services';
 
-const listViewOf = (evaluation: Omit<store.EvaluationRecord, 'curves'>): Omit<EvaluationView, 'curves'> => ({
+const listViewOf = (evaluation: Omit<store.EvaluationRecord, 'curves'>): ListedEvaluation => ({
   id: evaluation.id,
   runId: evaluation.runId,
   state: evaluation.state,
@@ -18,6 +19,12 @@ const listViewOf = (evaluation: Omit<store.EvaluationRecord, 'curves'>): Omit<Ev
   channel: evaluation.channel,
   error: evaluation.error,
   result: evaluation.result,
+  software: evaluation.software,
+  recomputes: evaluation.recomputes,
+  frozen:
+    evaluation.frozenAt === null
+      ? null
+      : { at: isoOf(evaluation.frozenAt), by: evaluation.frozenBy ?? '', reason: evaluation.frozenReason ?? '' },
 });
 
 const viewOf = (evaluation: store.EvaluationRecord): EvaluationView => ({ ...listViewOf(evaluation), curves: evaluation.curves });
@@ -26,6 +33,21 @@ async function loadRun(services: Services, labId: string, runId: string): Promis
   const run = await findRun(services.database.db, labId, runId);
   if (run === null) throw notFound('run');
   return run;
+}
+
+async function loadEvaluation(db: Handle, labId: string, evaluationId: string): Promise<store.EvaluationRecord> {
+  const evaluation = await store.findEvaluation(db, labId, evaluationId);
+  if (evaluation === null) throw notFound('evaluation');
+  return evaluation;
+}
+
+/** Why an evaluation cannot be frozen. */
+function notToBeFrozen({ recomputes, frozenAt, frozenBy }: store.EvaluationRecord): ProblemError {
+  if (recomputes !== null)
+    return new ProblemError('not-possible-now', 'It only computes a frozen evaluation again. Evaluate the run anew and freeze that.');
+  if (frozenAt !== null)
+    return new ProblemError('not-possible-now', `${frozenBy ?? 'Somebody'} froze this evaluation already, at ${isoOf(frozenAt)}.`);
+  return new ProblemError('not-possible-now', 'Only an evaluation that came to a result can be frozen.');
 }
 
 /** Name of the channel to evaluate: the one asked for, the registered one, or the only deflection channel with data. */
@@ -73,8 +95,32 @@ export const evaluationRoutes = [
   }),
 
   mount(contracts.getEvaluation, async ({ params, membership, services }) => {
-    const evaluation = await store.findEvaluation(services.database.db, membership.labId, params.evaluationId);
-    if (evaluation === null) throw notFound('evaluation');
+    return viewOf(await loadEvaluation(services.database.db, membership.labId, params.evaluationId));
+  }),
+
+  mount(contracts.freezeEvaluation, async (context) => {
+    const { params, body, me, membership, services } = context;
+    const which = { labId: membership.labId, evaluationId: params.evaluationId };
+    const frozen = { ...which, frozenAt: services.clock.utcMs(), frozenBy: me.name, frozenReason: body.reason };
+    const data = ({ id, runId }: store.EvaluationRecord) => ({ runId, evaluationId: id, reason: body.reason });
+    const evaluation = await audited(context, { kind: 'run.evaluation-frozen', data }, async (tx) => {
+      const done = await store.freezeEvaluation(tx, frozen);
+      if (done === null) throw notToBeFrozen(await loadEvaluation(tx, which.labId, which.evaluationId));
+      return done;
+    });
+    return viewOf(evaluation);
+  }),
+
+  mount(contracts.recomputeEvaluation, async (context) => {
+    const { params, me, membership, services } = context;
+    const { labId } = membership;
+    const { id, runId, channel, frozenAt } = await loadEvaluation(services.database.db, labId, params.evaluationId);
+    if (frozenAt === null)
+      throw new ProblemError('not-possible-now', 'This evaluation is not frozen. Freeze it first, or evaluate the run anew.');
+    const wanted = { labId, runId, channel, createdAt: services.clock.utcMs(), createdBy: me.name, recomputes: id };
+    const data = (made: { id: string }) => ({ runId, evaluationId: made.id, recomputes: id });
+    const evaluation = await audited(context, { kind: 'run.evaluation-recomputed', data }, (tx) => store.queueEvaluation(tx, wanted));
+    services.pokeJobs();
     return viewOf(evaluation);
   }),
 ];

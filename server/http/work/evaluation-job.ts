@@ -4,6 +4,7 @@ import { beginEvaluation, endEvaluation } from '@/server/store/evaluations';
 import { findRun } from '@/server/store/runs-read';
 import { archiveInputOf } from '../archive-input';
 import type { Services } from '../services';
+import { softwareVersion } from '../software';
 
 const payloadSchema = z.strictObject({ labId: z.string(), evaluationId: z.string() });
 
@@ -17,7 +18,8 @@ export async function workEvaluation(services: Services, job: Job): Promise<void
   if (run === null) throw new Error('the run of an evaluation is gone');
   try {
     const { result, curves } = await services.tasks.evaluate(await archiveInputOf(services, run), { channel: evaluation.channel });
-    await endEvaluation(db, payload, { result, curves, channel: evaluation.channel, finishedAt: services.clock.utcMs() });
+    const finishedAt = services.clock.utcMs();
+    await endEvaluation(db, payload, { result, curves, channel: evaluation.channel, software: softwareVersion, finishedAt });
   } catch (error) {
     if (error instanceof CutShort || (!isUnusable(error) && job.attempt < job.maxAttempts)) throw error;
     const why = error instanceof Error ? error.message : String(error);

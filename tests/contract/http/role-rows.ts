@@ -208,5 +208,7 @@ export const rows: Readonly<Record<string, Row>> = {
     allowed: 400,
   },
   removePushDevice: { params: () => ({ deviceId: nobody }), allowed: 404 },
+  freezeEvaluation: { params: ({ labId }) => ({ labId, evaluationId: nobody }), body: () => ({ reason: 'for the paper' }), allowed: 404 },
+  recomputeEvaluation: { params: ({ labId, evaluationId }) => ({ labId, evaluationId }), allowed: 409 },
   getEvaluation: { params: ({ labId, evaluationId }) => ({ labId, evaluationId }), allowed: 200 },
 };

@@ -1,5 +1,6 @@
 import { demoIds } from '@/db/demo/seed';
 import { evaluationViewSchema } from '@/shared/contracts/evaluations';
+import { compareResults } from '@/shared/evaluation/compare-results';
 import { CODATA_2022_G } from '@/shared/physics/constants';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol } from '@/tests/support/lab-server';
@@ -51,6 +52,30 @@ test('a rehearsal of the short protocol is stored like a run, and its evaluation
   const list = await lab.as('viewer', 'GET', `${labPath}/runs/${run.id}/evaluations`).expect(200);
   expect(list.body.items).toHaveLength(1);
   expect(list.body.items[0].curves).toBeUndefined();
+
+  const at = `${labPath}/evaluations/${done.id}`;
+  expect((await lab.as('analyst', 'POST', `${at}/recomputations`).expect(409)).body.detail).toMatch(/not frozen/);
+  await lab.as('analyst', 'POST', `${at}/freeze`).send({ reason: ' ' }).expect(400);
+  const frozen = await lab.as('analyst', 'POST', `${at}/freeze`).send({ reason: 'for the thesis' }).expect(200);
+  expect(frozen.body.frozen).toMatchObject({ by: 'Tam Ferrowdale', reason: 'for the thesis' });
+  expect((await lab.as('owner', 'POST', `${at}/freeze`).send({ reason: 'once more' }).expect(409)).body.detail).toMatch(
+    /^Tam Ferrowdale froze this evaluation already/,
+  );
+  const { pool } = database().connection;
+  await expect(pool.query('update evaluations set frozen_at = null where id = $1', [done.id])).rejects.toThrow(/never changed/);
+  const audit = await lab.as('owner', 'GET', `${labPath}/audit?kind=run.evaluation-frozen`).expect(200);
+  expect(audit.body.items[0].data).toMatchObject({ evaluationId: done.id, reason: 'for the thesis' });
+
+  const again = await lab.as('analyst', 'POST', `${at}/recomputations`).expect(202);
+  expect(again.body).toMatchObject({ state: 'queued', recomputes: done.id, channel: 'deflection' });
+  await lab.services.idle();
+  await lab.advance(31_000);
+  const recomputed = evaluationViewSchema.parse((await lab.as('viewer', 'GET', `${labPath}/evaluations/${again.body.id as string}`)).body);
+  expect(recomputed).toMatchObject({ state: 'done', software: done.software });
+  expect(done.software).toMatch(/^\d+\.\d+/);
+  if (done.result === null || recomputed.result === null) throw new Error('both came to a result');
+  expect(compareResults(done.result, recomputed.result)).toEqual([]);
+  await lab.as('analyst', 'POST', `${labPath}/evaluations/${recomputed.id}/freeze`).send({ reason: 'this too' }).expect(409);
 });
 
 test('a run whose data cannot give a result says why', async () => {

@@ -1,0 +1,110 @@
+import { useState } from 'react';
+import { View } from 'react-native';
+import { fieldErrors, useLab, useLabMutation, useMay, wordsOf } from '@/components/api';
+import { Body, Button, Field, Label, Panel, ProblemNotice, Section, Sheet } from '@/components/ui';
+import { freezeEvaluation, recomputeEvaluation, type ListedEvaluation } from '@/shared/contracts/evaluations';
+import { formatDayAndClock } from '@/shared/lib/format-time';
+import { softwareWords } from './evaluation-words';
+import { RecomputationPanel } from './recomputation-panel';
+import { atWork } from './use-evaluations';
+
+interface FreezePanelProps {
+  evaluation: ListedEvaluation;
+  /** The newest recomputation of it. */
+  recomputation: ListedEvaluation | null;
+  onChanged: () => void;
+}
+
+/** Freezes an evaluation for good; of a frozen one it tells who did it and why, and whether computing it again gives the same. */
+export function FreezePanel({ evaluation, recomputation, onChanged }: FreezePanelProps) {
+  const may = useMay('evaluate');
+  const [asks, setAsks] = useState(false);
+  if (evaluation.frozen !== null)
+    return <Frozen evaluation={evaluation} frozen={evaluation.frozen} recomputation={recomputation} onChanged={onChanged} />;
+  return (
+    <View className="flex-row flex-wrap items-center gap-3">
+      <Button label="Freeze this evaluation" disabled={!may.ok} onPress={() => setAsks(true)} testID="freeze" />
+      {may.ok ? null : (
+        <Label className="shrink" tone="text">
+          {may.why}
+        </Label>
+      )}
+      {asks ? <FreezeSheet evaluationId={evaluation.id} onClose={() => setAsks(false)} onDone={onChanged} /> : null}
+    </View>
+  );
+}
+
+type FrozenProps = FreezePanelProps & { frozen: NonNullable<ListedEvaluation['frozen']> };
+
+function Frozen({ evaluation, frozen, recomputation, onChanged }: FrozenProps) {
+  const may = useMay('evaluate');
+  const { timeZone } = useLab();
+  const recompute = useLabMutation(recomputeEvaluation, onChanged);
+  const works = recompute.isPending || atWork(recomputation?.state);
+  return (
+    <Section title="Frozen">
+      <Panel edge="near" className="gap-3" testID="frozen">
+        <Body>{frozen.reason}</Body>
+        <Label>
+          Frozen {formatDayAndClock(Date.parse(frozen.at), timeZone)} by {frozen.by}. {softwareWords(evaluation.software)}.
+        </Label>
+        {recompute.isError ? <ProblemNotice title="It is not computed again" {...wordsOf(recompute.error)} /> : null}
+        {recomputation === null ? null : <RecomputationPanel frozen={evaluation} recomputation={recomputation} />}
+        <View className="flex-row flex-wrap items-center gap-3">
+          <Button
+            label="Recompute and compare"
+            busy={works}
+            disabled={!may.ok}
+            onPress={() => recompute.mutate({ params: { evaluationId: evaluation.id } })}
+            testID="recompute"
+          />
+          {may.ok ? null : (
+            <Label className="shrink" tone="text">
+              {may.why}
+            </Label>
+          )}
+        </View>
+      </Panel>
+    </Section>
+  );
+}
+
+/** Asks for the reason; freezing is what its one button does. */
+function FreezeSheet({ evaluationId, onClose, onDone }: { evaluationId: string; onClose: () => void; onDone: () => void }) {
+  const [reason, setReason] = useState('');
+  const freeze = useLabMutation(freezeEvaluation, () => {
+    onDone();
+    onClose();
+  });
+  const said = reason.trim();
+  return (
+    <Sheet
+      open
+      title="Freeze this evaluation"
+      onClose={onClose}
+      testID="freeze-sheet"
+      footer={
+        <Button
+          kind="primary"
+          size="action"
+          label="Freeze for good"
+          busy={freeze.isPending}
+          disabled={said.length < 3}
+          onPress={() => freeze.mutate({ params: { evaluationId }, body: { reason: said } })}
+          testID="freeze-send"
+        />
+      }
+    >
+      <Body tone="dim">It stays as it is, and nobody can undo that. The run can be evaluated again, beside it.</Body>
+      <Field
+        label="Why"
+        value={reason}
+        onChange={setReason}
+        error={fieldErrors(freeze.error)['reason']}
+        hint="Kept with your name, here and in the audit trail."
+        testID="freeze-reason"
+      />
+      {freeze.isError ? <ProblemNotice title="It was not frozen" {...wordsOf(freeze.error)} /> : null}
+    </Sheet>
+  );
+}
