@@ -1,5 +1,6 @@
-import type { BuildArchiveInput } from '@/shared/archive/build-archive';
+import type { BuildArchiveInput, FrozenEvaluation } from '@/shared/archive/build-archive';
 import type { ChannelSeries } from '@/shared/archive/run-records';
+import { findFrozenEvaluation } from '../store/evaluations';
 import { channelsOfRun, countSamples, readEvents, readSteps, type RunRecord } from '../store/runs-read';
 import { isoOf } from './maker';
 import { ProblemError } from './problem-error';
@@ -30,6 +31,14 @@ async function seriesOf(services: Services, run: RunRecord): Promise<ChannelSeri
   return series;
 }
 
+/** The evaluation frozen last, as the archive holds it. */
+async function frozenOf(services: Services, { labId, id }: RunRecord): Promise<FrozenEvaluation | null> {
+  const found = await findFrozenEvaluation(services.database.db, labId, id);
+  if (found === null || found.result === null || found.frozenAt === null) return null;
+  const { result, frozenAt, frozenBy, frozenReason, software, channel } = found;
+  return { ...result, frozen: { at: isoOf(frozenAt), by: frozenBy ?? '', reason: frozenReason ?? '', software, channel } };
+}
+
 /** Everything of an ended run, as the archive wants it. */
 export async function archiveInputOf(services: Services, run: RunRecord): Promise<BuildArchiveInput> {
   const { db } = services.database;
@@ -50,6 +59,7 @@ export async function archiveInputOf(services: Services, run: RunRecord): Promis
     steps: await readSteps(db, { labId: run.labId, runId: run.id }),
     events: await readEvents(db, { labId: run.labId, runId: run.id }, { afterSeq: 0 }),
     channels: await seriesOf(services, run),
+    evaluation: await frozenOf(services, run),
     createdAt: isoOf(services.clock.utcMs()),
     software: `Evenfall ${softwareVersion}`,
     title: `${start.protocolName} on ${start.rigName}`,

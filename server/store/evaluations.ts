@@ -1,4 +1,4 @@
-import { and, desc, eq, inArray, isNull } from 'drizzle-orm';
+import { and, desc, eq, inArray, isNotNull, isNull } from 'drizzle-orm';
 import { evaluations } from '@/db/schema';
 import type { EvaluationResult, FitCurve } from '@/shared/evaluation/result';
 import { one, type Handle, type Transaction } from './database';
@@ -98,4 +98,15 @@ export async function freezeEvaluation(
     .where(and(eq(evaluations.labId, labId), eq(evaluations.id, evaluationId), open))
     .returning();
   return row ?? null;
+}
+
+/** The evaluation of a run that was frozen last; null where none is. */
+export async function findFrozenEvaluation(db: Handle, labId: string, runId: string): Promise<Omit<EvaluationRecord, 'curves'> | null> {
+  const [found] = await db
+    .select(listColumns)
+    .from(evaluations)
+    .where(and(eq(evaluations.labId, labId), eq(evaluations.runId, runId), isNotNull(evaluations.frozenAt)))
+    .orderBy(desc(evaluations.frozenAt), desc(evaluations.id))
+    .limit(1);
+  return found ?? null;
 }

@@ -1,4 +1,5 @@
 import { CODATA_2022_G } from '@/shared/physics/constants';
+import type { EvaluationResult } from '../evaluation/result';
 import type { ProtocolDocument } from '../protocol/document';
 import type { RigDocument } from '../rig/document';
 import type { Sha256OfBytes } from './archive-types';
@@ -21,6 +22,11 @@ export interface ArchiveRunFacts {
   simulated: SimulatedRun | null;
 }
 
+/** `evaluation.json`: what `evaluate` prints, and who froze it. */
+export type FrozenEvaluation = EvaluationResult & {
+  frozen: { at: string; by: string; reason: string; software: string | null; channel: string | null };
+};
+
 export interface BuildArchiveInput {
   run: ArchiveRunFacts;
   rig: RigDocument;
@@ -29,6 +35,7 @@ export interface BuildArchiveInput {
   events: readonly ChainedEvent[];
   channels: readonly ChannelSeries[];
   exclusions?: readonly Exclusion[];
+  evaluation?: FrozenEvaluation | null;
   /** ISO 8601 UTC: when the archive is made. Also the time of the `archived` event, unless the chain already ends in one. */
   createdAt: string;
   /** Name and version of the writer. */
@@ -57,6 +64,7 @@ export function buildArchive(input: BuildArchiveInput, sha256OfBytes: Sha256OfBy
   ];
   if (input.exclusions !== undefined)
     files.push(csvFile(exclusionsFile, exclusionsCsv(input.exclusions), { name: 'exclusions', schema: exclusionsSchema }));
+  if (input.evaluation) files.push(jsonFile('evaluation.json', input.evaluation));
   files.push(...descriptions(input, files, sha256));
   const archive = new Map(files.map((file) => [file.path, file.bytes]));
   archive.set('datapackage.json', utf8(`${JSON.stringify(dataPackage(input, files, sha256), null, 2)}\n`));

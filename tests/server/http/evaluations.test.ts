@@ -1,4 +1,5 @@
 import { demoIds } from '@/db/demo/seed';
+import { readZip } from '@/server/evaluation/archive-files';
 import { evaluationViewSchema } from '@/shared/contracts/evaluations';
 import { compareResults } from '@/shared/evaluation/compare-results';
 import { CODATA_2022_G } from '@/shared/physics/constants';
@@ -65,6 +66,10 @@ test('a rehearsal of the short protocol is stored like a run, and its evaluation
   await expect(pool.query('update evaluations set frozen_at = null where id = $1', [done.id])).rejects.toThrow(/never changed/);
   const audit = await lab.as('owner', 'GET', `${labPath}/audit?kind=run.evaluation-frozen`).expect(200);
   expect(audit.body.items[0].data).toMatchObject({ evaluationId: done.id, reason: 'for the thesis' });
+
+  const zip = await lab.as('viewer', 'GET', `${labPath}/runs/${run.id}/archive.zip`).responseType('blob').expect(200);
+  const kept = JSON.parse(new TextDecoder().decode(readZip(zip.body as Buffer).get('evaluation.json'))) as Record<string, unknown>;
+  expect(kept).toMatchObject({ G: done.result?.G, frozen: { by: 'Tam Ferrowdale', reason: 'for the thesis', software: done.software } });
 
   const again = await lab.as('analyst', 'POST', `${at}/recomputations`).expect(202);
   expect(again.body).toMatchObject({ state: 'queued', recomputes: done.id, channel: 'deflection' });
