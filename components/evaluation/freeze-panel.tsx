@@ -101,7 +101,7 @@ function FreezeSheet({ evaluationId, onClose, onDone }: { evaluationId: string; 
         value={reason}
         onChange={setReason}
         error={fieldErrors(freeze.error)['reason']}
-        hint="Kept with your name, here and in the audit trail."
+        hint="In a few words; kept with your name, here and in the audit trail."
         testID="freeze-reason"
       />
       {freeze.isError ? <ProblemNotice title="It was not frozen" {...wordsOf(freeze.error)} /> : null}
