@@ -47,7 +47,7 @@ export function makePlan(document: ProtocolDocument, rig: RigDocument): Plan {
   const signal = predictSignal(rig);
   const cadence = cadenceOf(timeline, rig);
   const predicted = cadence === null ? null : predictU(rig, cadence);
-  const others = alternatives(rig, { durationS: timeline.durationS, calibrated: cadence?.calibrated ?? false });
+  const others = alternatives(rig, { durationS: timeline.durationS, calibrations: cadence?.calibrations ?? [] });
   const peak = peakExcursionRad(rig, timeline);
   return {
     duration_s: Math.round(timeline.durationS * 1e6) / 1e6,

@@ -3,8 +3,9 @@ import { oscillatorOf, type Oscillator } from '../physics/oscillator';
 import type { RigDocument } from '../rig/document';
 import { abaDifference } from '../statistics/drift';
 import { offset, ringDownSegment } from '../statistics/ring-down';
-import { at, invertSymmetric, type Matrix } from '../statistics/symmetric';
+import { at, bilinear, invertSymmetric, type Matrix } from '../statistics/symmetric';
 import { solveAtFixedAlpha } from '../statistics/variable-projection';
+import type { Calibration } from './calibration';
 
 /** What an alternating night of dwells leaves open by its noise (physics.md J1). */
 
@@ -14,8 +15,8 @@ export interface Cadence {
   dwellS: number;
   /** From dwell to dwell, s. */
   cycleS: number;
-  /** Whether the ringing is told from a calibration, so that each dwell has only its own amplitudes to find. */
-  calibrated: boolean;
+  /** Ring-downs after a kick, from which the ringing of the dwells is told too, so that each has only its own amplitudes to find. */
+  calibrations: readonly Calibration[];
   /** The dwells hold ringing that has to be fitted at all. */
   rings: boolean;
 }
@@ -28,8 +29,7 @@ const dataPerDwell = 240;
  * Variance of the fitted centre of one dwell over that of a plain mean of its samples (physics.md C4): columns for drift and ringing cost,
  * and much more so when ω and γ have to come from the same dwell.
  */
-export function inflation(oscillator: Oscillator, dwellS: number, { calibrated, rings }: Pick<Cadence, 'calibrated' | 'rings'>): number {
-  if (!rings) return 1;
+export function inflation(oscillator: Oscillator, dwellS: number, { calibrated }: { calibrated: boolean }): number {
   const fit = unitFit(oscillator, dwellS);
   const segment = fit.segments[0];
   if (segment === undefined) return Infinity;
@@ -40,9 +40,9 @@ export function inflation(oscillator: Oscillator, dwellS: number, { calibrated, 
   return dataPerDwell * (known + shift.reduce((sum, a, i) => sum + shift.reduce((own, b, j) => own + a * at(covariance, i, j) * b, 0), 0));
 }
 
-/** One dwell that rings with an amplitude of 1. */
-function unitFit({ omegaD, gamma }: Oscillator, dwellS: number) {
-  const tS = Float64Array.from({ length: dataPerDwell }, (_, k) => (dwellS * (k + 0.5)) / dataPerDwell);
+/** So long a recording that rings with an amplitude of 1. */
+function unitFit({ omegaD, gamma }: Oscillator, lengthS: number) {
+  const tS = Float64Array.from({ length: dataPerDwell }, (_, k) => (lengthS * (k + 0.5)) / dataPerDwell);
   const y = tS.map((t) => Math.exp(-gamma * t) * Math.cos(omegaD * t));
   return solveAtFixedAlpha([ringDownSegment({ tS, y })], [omegaD, gamma]);
 }
@@ -53,18 +53,31 @@ function ringing({ omegaD, gamma }: Oscillator, cycleS: number): number {
   return 1 / Math.hypot(1 + decay * Math.cos(omegaD * cycleS), decay * Math.sin(omegaD * cycleS));
 }
 
-/** Standard uncertainty of near minus far, rad; null where the rig has no measured pendulum. */
-export function differenceU(rig: RigDocument, cadence: Cadence): number | null {
+/** Standard uncertainty of near minus far, of which the signal (rad) is expected, rad; null where the rig has no measured pendulum. */
+export function differenceU(rig: RigDocument, cadence: Cadence, signalRad: number): number | null {
   const oscillator = oscillatorOf(rig);
   if (oscillator === null || cadence.dwells < 2 || !(cadence.dwellS > 0)) return null;
   const { readout_rad: readout = 0, walk_rad_per_sqrt_min: walk = 0, temperature_K: temperature = 0 } = rig.noise ?? {};
   const { dwellS, cycleS, dwells } = cadence;
   const { inertiaKgM2, gamma, kappa } = oscillator;
-  const white = (inflation(oscillator, dwellS, cadence) * readout ** 2) / (usualRateHz * dwellS);
+  const inflated = cadence.rings ? inflation(oscillator, dwellS, { calibrated: true }) : 1;
+  const white = (inflated * readout ** 2) / (usualRateHz * dwellS);
   const thermal = (8 * BOLTZMANN_J_K * temperature * inertiaKgM2 * gamma) / (kappa * kappa) / (2 * dwellS);
   const weights = weightsOf(dwells);
   const squares = weights.reduce((sum, w) => sum + w * w, 0);
-  return Math.sqrt((white + thermal) * squares + (walk ** 2 / 60) * wanderingS(weights, { dwellS, cycleS }));
+  const scatter = (white + thermal) * squares + (walk ** 2 / 60) * wanderingS(weights, { dwellS, cycleS });
+  return Math.sqrt(scatter + coherent(rig, cadence, { oscillator, signalRad }));
+}
+
+/**
+ * What an error of ω and γ does to near minus far, as a variance: near and far ring in opposite senses, so it shifts their centres in
+ * opposite senses too (physics.md C4).
+ */
+function coherent(rig: RigDocument, cadence: Cadence, { oscillator, signalRad }: { oscillator: Oscillator; signalRad: number }): number {
+  const covariance = pendulumCovariance(rig, cadence, signalRad);
+  const shift = unitFit(oscillator, cadence.dwellS).segments[0]?.shift[offset];
+  if (covariance === null || shift === undefined) return 0;
+  return (2 * signalRad * ringing(oscillator, cadence.cycleS)) ** 2 * bilinear(shift, covariance, shift);
 }
 
 /** What near minus far is made of, dwell by dwell: ABA windows, a plain difference of two. */
@@ -88,15 +101,25 @@ function wanderingS(weights: readonly number[], { dwellS, cycleS }: Pick<Cadence
   return variance;
 }
 
-/** Standard uncertainties of ω (rad/s) and γ (1/s) that the ringing of the night itself gives; null where there is none. */
-export function ringingU(rig: RigDocument, cadence: Cadence, signalRad: number): { omega: number; gamma: number } | null {
+/** No reading is quite without noise, rad2/Hz. */
+const leastDensity = 1e-25;
+
+/**
+ * Covariance of ω (rad/s) and γ (1/s) as the ringing of the night itself tells them, in its dwells and after its kicks, if near minus far is
+ * so many rad; null where nothing rings.
+ */
+export function pendulumCovariance(rig: RigDocument, cadence: Cadence, signalRad: number): Matrix | null {
   const oscillator = oscillatorOf(rig);
-  const readout = rig.noise?.readout_rad ?? 0;
   if (oscillator === null || !cadence.rings || cadence.dwells < 1) return null;
-  const { information } = unitFit(oscillator, cadence.dwellS);
-  const amplitude = Math.abs(signalRad) * ringing(oscillator, cadence.cycleS);
-  const datum = readout / Math.sqrt((usualRateHz * cadence.dwellS) / dataPerDwell);
-  const scale = (cadence.dwells * amplitude ** 2) / Math.max(datum, 1e-12) ** 2;
-  const covariance: Matrix = invertSymmetric(information.map((row) => row.map((value) => value * scale)));
-  return { omega: Math.sqrt(at(covariance, 0, 0)), gamma: Math.sqrt(at(covariance, 1, 1)) };
+  const { readout_rad: readout = 0, walk_rad_per_sqrt_min: walk = 0 } = rig.noise ?? {};
+  // What a wandering zero has at the pendulum's own frequency counts as much as the readout's.
+  const density = Math.max(readout ** 2 / usualRateHz + walk ** 2 / 60 / oscillator.omegaD ** 2, leastDensity);
+  const inDwells = { count: cadence.dwells, lengthS: cadence.dwellS, amplitudeRad: signalRad * ringing(oscillator, cadence.cycleS) };
+  const recordings = [inDwells, ...cadence.calibrations.map((one) => ({ count: 1, ...one }))];
+  const parts = recordings.map(({ count, lengthS, amplitudeRad }) => ({
+    information: unitFit(oscillator, lengthS).information,
+    scale: (count * amplitudeRad ** 2 * lengthS) / dataPerDwell / density,
+  }));
+  const sum = (i: number, j: number) => parts.reduce((total, { information, scale }) => total + scale * at(information, i, j), 0);
+  return invertSymmetric([0, 1].map((i) => [0, 1].map((j) => sum(i, j))));
 }

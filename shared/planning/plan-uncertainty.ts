@@ -5,7 +5,8 @@ import { equilibriumRad } from '../physics/equilibrium';
 import { inertiaKgM2, oscillatorOf } from '../physics/oscillator';
 import { geometryOf, torquePerG } from '../physics/torque';
 import type { RigDocument } from '../rig/document';
-import { differenceU, ringingU, type Cadence } from './night-noise';
+import { at } from '../statistics/symmetric';
+import { differenceU, pendulumCovariance, type Cadence } from './night-noise';
 
 /** u of G after a night, by what it comes from. */
 export interface PredictedU {
@@ -23,13 +24,14 @@ export interface PredictedU {
 export function predictU(rig: RigDocument, cadence: Cadence): PredictedU | null {
   const oscillator = oscillatorOf(rig);
   const [near, far] = [rig.stations.near, rig.stations.far];
-  const u = differenceU(rig, cadence);
-  if (oscillator === null || near === undefined || far === undefined || u === null || rig.sources.shape === 'none') return null;
+  if (oscillator === null || near === undefined || far === undefined || rig.sources.shape === 'none') return null;
   const geometry = geometryOf(rig);
   const bigG = CODATA_2022_G.value;
   const restAt = (angleDeg: number) => equilibriumRad({ geometry, kappa: oscillator.kappa, bigG, phiRad: angleDeg * RAD_PER_DEG });
   const [nearRad, farRad] = [restAt(near.value), restAt(far.value)];
   const signal = nearRad - farRad;
+  const u = differenceU(rig, cadence, signal);
+  if (u === null) return null;
   const { periodS, decayTimeS } = oscillator;
   const gOf = (supposed: RigDocument, changes: { signal?: number; periodS?: number; decayTimeS?: number } = {}) => {
     const kappa = inertiaKgM2(supposed) * (((2 * Math.PI) / (changes.periodS ?? periodS)) ** 2 + (changes.decayTimeS ?? decayTimeS) ** -2);
@@ -91,11 +93,11 @@ function pendulumU(
   cadence: Cadence,
   { signal, periodS, decayTimeS }: { signal: number; periodS: number; decayTimeS: number },
 ): { period: number; decay: number } {
-  const night = ringingU(rig, cadence, signal);
+  const night = pendulumCovariance(rig, cadence, signal);
   const both = (measured: number, own: number | null) =>
     own === null ? measured : measured === 0 ? 0 : 1 / Math.hypot(1 / measured, 1 / own);
   return {
-    period: both(rig.measured?.period_s?.u ?? 0, night === null ? null : (night.omega * periodS ** 2) / (2 * Math.PI)),
-    decay: both(rig.measured?.decayTime_s?.u ?? 0, night === null ? null : night.gamma * decayTimeS ** 2),
+    period: both(rig.measured?.period_s?.u ?? 0, night === null ? null : (Math.sqrt(at(night, 0, 0)) * periodS ** 2) / (2 * Math.PI)),
+    decay: both(rig.measured?.decayTime_s?.u ?? 0, night === null ? null : Math.sqrt(at(night, 1, 1)) * decayTimeS ** 2),
   };
 }

@@ -3,6 +3,7 @@ import { swingMove, UnplayableStep } from '../protocol/durations';
 import { sideAt } from '../protocol/stations';
 import type { Timeline } from '../protocol/timeline';
 import type { RigDocument } from '../rig/document';
+import { calibrationsOf } from './calibration';
 import type { Cadence } from './night-noise';
 import { predictU } from './plan-uncertainty';
 
@@ -18,11 +19,12 @@ export function cadenceOf({ items }: Pick<Timeline, 'items'>, rig: RigDocument):
   const total = dwells.reduce((sum, { startUtcMs, endUtcMs }) => sum + (endUtcMs - startUtcMs) / 1000, 0);
   const between = (last.startUtcMs - first.startUtcMs) / 1000 / Math.max(1, dwells.length - 1);
   const dwellS = total / dwells.length;
+  const oscillator = oscillatorOf(rig);
   return {
     dwells: dwells.length,
     dwellS,
     cycleS: Math.max(dwellS, between),
-    calibrated: items.some(({ kind }) => kind === 'kick'),
+    calibrations: oscillator === null ? [] : calibrationsOf(items, rig, oscillator),
     rings: true,
   };
 }
@@ -53,7 +55,10 @@ function swingS(rig: RigDocument): number | null {
  * The best of each strategy in the same time: fitting through the ringing at a beat of whole periods, swings in two moves, and waiting
  * until the ringing has died to a hundredth. Empty where the rig does not tell.
  */
-export function alternatives(rig: RigDocument, { durationS, calibrated }: { durationS: number; calibrated: boolean }): Alternative[] {
+export function alternatives(
+  rig: RigDocument,
+  { durationS, calibrations }: { durationS: number; calibrations: Cadence['calibrations'] },
+): Alternative[] {
   const oscillator = oscillatorOf(rig);
   const moveS = swingS(rig);
   if (oscillator === null || moveS === null || !(durationS > 0)) return [];
@@ -66,7 +71,7 @@ export function alternatives(rig: RigDocument, { durationS, calibrated }: { dura
   return (Object.keys(dead) as Alternative['strategy'][]).flatMap((strategy) => {
     const candidates = Array.from({ length: mostPeriods }, (_, k) => k + 1)
       // One period is too short to tell ω and γ by without a calibration.
-      .filter((periods) => strategy !== 'plain' || calibrated || periods > 1)
+      .filter((periods) => strategy !== 'plain' || calibrations.length > 0 || periods > 1)
       .flatMap((periods) => {
         const dwellS =
           strategy === 'wait' ? periods * periodS : Math.ceil((dead[strategy] + 1) / periodS + periods - 1) * periodS - dead[strategy];
@@ -76,7 +81,7 @@ export function alternatives(rig: RigDocument, { durationS, calibrated }: { dura
           dwells,
           dwellS,
           cycleS,
-          calibrated: calibrated || strategy !== 'plain',
+          calibrations,
           rings: strategy === 'plain',
         });
         return found === null

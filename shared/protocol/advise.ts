@@ -129,7 +129,7 @@ function noRingDown(dwells: readonly SideDwell[], rig: RigDocument): Finding[] {
   const oscillator = oscillatorOf(rig);
   const shortest = Math.min(...dwells.map((dwell) => dwell.durationS));
   if (oscillator === null || new Set(dwells.map(({ side }) => side)).size < 2 || !(shortest > 0)) return [];
-  const [alone, calibrated] = [false, true].map((known) => inflation(oscillator, shortest, { calibrated: known, rings: true }));
+  const [alone, calibrated] = [false, true].map((known) => inflation(oscillator, shortest, { calibrated: known }));
   const loss = Math.sqrt((alone as number) / (calibrated as number));
   if (!(loss > worthARingDown)) return [];
   return [

@@ -1,6 +1,7 @@
 import { oscillatorOf, type Oscillator } from '@/shared/physics/oscillator';
 import { seededStreams, type GaussianSource } from '@/shared/physics/seeded-gaussian';
 import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
+import { predictSignal } from '@/shared/protocol/predict';
 import type { RigDocument } from '@/shared/rig/document';
 import { differenceU, type Cadence } from '@/shared/planning/night-noise';
 import type { Alternative } from '@/shared/planning/strategies';
@@ -20,9 +21,8 @@ const rateHz = 10;
 const binsPerPeriod = 24;
 /** The calibration of practice: ten periods after a kick of 5 mrad. */
 const ringDown = { periods: 10, amplitudeRad: 5e-3 };
-const signalRad = 2e-3;
 /** Ringing at the start of a dwell as a share of the step. */
-const ringing: Record<Alternative['strategy'], number> = { plain: 0.65, shaped: 0.01, wait: 0.01 };
+const ringing: Record<Alternative['strategy'], number> = { plain: 0.6, shaped: 0.01, wait: 0.01 };
 
 const withNoise = (rig: RigDocument, readout: number, walk: number): RigDocument => ({
   ...rig,
@@ -55,7 +55,8 @@ export interface Planned {
 function cadenceOf({ periodS, gamma }: Oscillator, strategy: Planned['strategy']): Cadence {
   const dead = { plain: moveS, shaped: moveS + periodS / 2, wait: moveS + Math.log(100) / gamma }[strategy];
   const cycleS = { plain: periodS, shaped: 2 * periodS, wait: dead + periodS }[strategy];
-  return { dwells: Math.floor(nightS / cycleS), dwellS: cycleS - dead, cycleS, calibrated: true, rings: strategy === 'plain' };
+  const calibrations = [{ amplitudeRad: ringDown.amplitudeRad, lengthS: ringDown.periods * periodS }];
+  return { dwells: Math.floor(nightS / cycleS), dwellS: cycleS - dead, cycleS, calibrations, rings: strategy === 'plain' };
 }
 
 /** Every strategy on every rig with so many simulated nights of twelve hours. */
@@ -65,11 +66,12 @@ export function heldAgainstPlan(nights: number): Planned[] {
     const oscillator = oscillatorOf(rig) as Oscillator;
     return (Object.keys(ringing) as Planned['strategy'][]).map((strategy) => {
       const cadence = cadenceOf(oscillator, strategy);
+      const signalRad = predictSignal(rig)?.signalRad ?? NaN;
       const found = Array.from({ length: nights }, () =>
-        difference(rig, { oscillator, cadence, ringing: ringing[strategy], seed: (seed += 1) }),
+        difference(rig, { oscillator, cadence, signalRad, ringingRad: ringing[strategy] * signalRad, seed: (seed += 1) }),
       );
       const scatter = Math.sqrt(found.reduce((sum, value) => sum + (value - signalRad) ** 2, 0) / nights);
-      return { rig: name, strategy, dwells: cadence.dwells, ratio: scatter / (differenceU(rig, cadence) as number) };
+      return { rig: name, strategy, dwells: cadence.dwells, ratio: scatter / (differenceU(rig, cadence, signalRad) as number) };
     });
   });
 }
@@ -81,7 +83,8 @@ export const geometricMean = (planned: readonly Planned[]) =>
 interface Night {
   oscillator: Oscillator;
   cadence: Cadence;
-  ringing: number;
+  signalRad: number;
+  ringingRad: number;
   seed: number;
 }
 
@@ -109,7 +112,7 @@ function difference(rig: RigDocument, night: Night): number {
   const segments = Array.from({ length: dwells }, (_, k) => {
     wander(cycleS - dwellS);
     const side = k % 2 === 0 ? 1 : -1;
-    return stretch(dwellS, (side * signalRad) / 2, -side * night.ringing * signalRad);
+    return stretch(dwellS, (side * night.signalRad) / 2, -side * night.ringingRad);
   });
   const fit = fitSeparable([calibration, ...segments], [omegaD, gamma]);
   return abaDifference(
