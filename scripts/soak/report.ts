@@ -21,7 +21,8 @@ function report({ partial = false, ...result }: SoakResult): void {
     date: new Date().toISOString().slice(0, 10),
     tookS: Math.round(process.uptime()),
   };
-  const text = `${JSON.stringify(stamped, null, 2)}\n`;
+  // Short lists of numbers stand on one line, as the formatter of the repository has them.
+  const text = `${JSON.stringify(stamped, null, 2).replace(/\[[^[\]{}"]{1,100}\]/g, (list) => list.replace(/\s+/g, ' ').replace('[ ', '[').replace(' ]', ']'))}\n`;
   process.stdout.write(text);
   if (!partial) {
     mkdirSync(join(root, 'docs', 'soak'), { recursive: true });
