@@ -23,6 +23,7 @@ import { buildStanding, engineItself } from './build-standing';
 import { FileJournals } from './file-journal';
 import { LeaseKeeper, type RigKey } from './lease-keeper';
 import type { MemoryLockKeeper } from './lock-keeper';
+import { RealClock } from './real-clock';
 import { RigApparatus } from './rig-apparatus';
 import { ServerRigStations } from './rig-stations';
 
@@ -110,6 +111,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     onError: (error, { runId, rigId }) => log.error({ err: error, runId, rigId }, 'a run went wrong'),
   });
 
+  if (clock instanceof RealClock) clock.keepSteadyWhile(() => supervisor.drives());
   const guided = buildGuided({ clock, linkOf, arms, locks, onLine, supervisor });
   const heed = heedLinks({ arms, arming, guided, soak }, wiring, () => clock.utcMs());
 

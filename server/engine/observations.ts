@@ -100,10 +100,12 @@ export function noteArmKey(draft: Draft): void {
   draft.log('arm-key', { on: draft.told('link.arm-key').link.on });
 }
 
-/** Stamps before and after a step of a clock are not to be subtracted without a look. */
+/** Of the controller's clock, stamps before and after are not to be subtracted without a look. Where the server's is set ahead, the arm does not last longer for it. */
 export function noteClock(draft: Draft): void {
+  const { context } = draft;
   const { clock, byMs } = draft.told('link.clock-stepped').link;
   draft.log('clock-stepped', { clock, byMs });
+  if (clock === 'host' && byMs > 0 && context.arm !== null) context.arm = { ...context.arm, untilUtcMs: context.arm.untilUtcMs - byMs };
 }
 
 export function noteLease(draft: Draft): void {

@@ -136,6 +136,11 @@ export class RigSupervisor {
     return this.byRig.get(rigId) ?? null;
   }
 
+  /** Whether any run goes on here. */
+  drives(): boolean {
+    return [...this.byRig.values()].some((driver) => !driver.isOver());
+  }
+
   driverOf(runId: string): RunDriver | null {
     return [...this.byRig.values()].find((driver) => driver.runId === runId) ?? null;
   }

@@ -5,11 +5,18 @@
 export interface Clock {
   /** Milliseconds since an arbitrary origin, never stepping. */
   monotonicMs(): number;
-  /** Milliseconds since 1970-01-01T00:00:00Z, with fraction. */
+  /** Milliseconds since 1970-01-01T00:00:00Z, with fraction; while a run goes on it does not follow a wall clock that is set. */
   utcMs(): number;
+  /** By the wall clock, which may be set; absent where that is `utcMs`. */
+  wallUtcMs?(): number;
   /** Runs `task` once, `delayMs` of monotonic time from now (0 or less: as soon as possible, never synchronously). */
   after(delayMs: number, task: () => void): Cancel;
 }
+
+/** Between two looks at the host's clocks, half a second apart, UTC moves by no more than this unless it is set. */
+export const HOST_STEP_MS = 20;
+
+export const wallUtcMs = (clock: Clock): number => clock.wallUtcMs?.() ?? clock.utcMs();
 
 export type Cancel = () => void;
 

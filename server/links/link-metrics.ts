@@ -1,14 +1,12 @@
 import type { Reply } from '@/firmware-protocol/codec';
 import type { ByteLineFactory } from '../interfaces/byte-line';
-import type { Clock } from '../interfaces/clock';
+import { type Clock, HOST_STEP_MS, wallUtcMs } from '../interfaces/clock';
 import type { ClockExchange, ClockModel } from './clock-model';
 import type { LinkHealth } from '../interfaces/turntable-link';
 import type { LiveRequest } from './wire';
 
 /** So many impossible exchanges in a row mean that the line does not keep to its rate, as boards with USB of their own do not. */
 const IMPOSSIBLE_IN_A_ROW = 3;
-/** Between two looks at the host's clocks, half a second apart, UTC moves by no more than this unless it is set. */
-const HOST_STEP_MS = 20;
 const PPM = 1e6;
 /** Round trips that the percentiles are taken of. */
 const KEPT_ROUND_TRIPS = 100;
@@ -58,7 +56,7 @@ export class LinkMetrics {
 
   /** Looks at the host's two clocks; an ordinary correction slews by 0.5 ms a second at most (adjtimex, from memory). */
   watchHost(): void {
-    const aheadMs = this.setting.clock.utcMs() - this.setting.clock.monotonicMs();
+    const aheadMs = wallUtcMs(this.setting.clock) - this.setting.clock.monotonicMs();
     const byMs = this.aheadMs === null ? 0 : aheadMs - this.aheadMs;
     this.aheadMs = aheadMs;
     if (Math.abs(byMs) > HOST_STEP_MS) this.setting.stepped('host', byMs);

@@ -257,7 +257,8 @@ const kinds = {
     onDelayS: 0,
     title: 'Clock stepped',
     cause: 'The clock of the server or of the controller jumped.',
-    consequence: 'Times around the jump carry a larger uncertainty.',
+    consequence:
+      'A run that goes on keeps to the time it began with, and lasts no longer for it. What the controller’s clock told carries a larger uncertainty.',
     answer: 'See that the server follows a time server, and look at the step log.',
   },
   'sign-of-life-failed': {

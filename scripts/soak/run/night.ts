@@ -8,7 +8,7 @@ import { World } from './world';
 
 /** A night of a few minutes with everything that can go wrong, from a seed: line, controller, process, database, clock and people. */
 
-const startUtcMs = Date.UTC(2026, 2, 1, 22);
+export const startUtcMs = Date.UTC(2026, 2, 1, 22);
 const TROUBLE_MS = 240_000;
 /** The longest that is left of a run, and of faults that were begun, when all is well again. */
 const HEALING_MS = 330_000;
@@ -210,7 +210,7 @@ function protocolOf(policy: InterruptionPolicy, { between }: Dice): ProtocolDocu
   };
 }
 
-const startOf = (protocol: ProtocolDocument): RunStart => ({
+export const startOf = (protocol: ProtocolDocument): RunStart => ({
   labId: 'lab',
   runId: 'run-1',
   rigId: 'north-bench',

@@ -6,6 +6,7 @@ import { MemoryJournals } from '@/server/engine/memory-journal';
 import { RigSupervisor } from '@/server/engine/rig-supervisor';
 import type { Arm } from '@/server/engine/run-context';
 import type { RunDriver } from '@/server/engine/run-driver';
+import { SteadyUtc } from '@/server/engine/steady-utc';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import type { Clock } from '@/server/interfaces/clock';
@@ -71,12 +72,24 @@ export class SimulatedStore implements RunStore {
   }
 }
 
-/** The wall clock of the server's machine, which may step; durations do not. */
+/** The clocks of the server's machine: the wall clock may be set, and run at another rate than durations are measured by. */
 class SteppingClock implements Clock {
   stepMs = 0;
-  constructor(private readonly clock: VirtualClock) {}
+  ratePpm = 0;
+  private steady: SteadyUtc;
+  constructor(
+    private readonly clock: VirtualClock,
+    private readonly goesOn: () => boolean,
+  ) {
+    this.steady = new SteadyUtc(goesOn);
+  }
   monotonicMs = () => this.clock.monotonicMs();
-  utcMs = () => this.clock.utcMs() + this.stepMs;
+  wallUtcMs = () => this.clock.utcMs() + this.stepMs + this.ratePpm * 1e-6 * this.monotonicMs();
+  utcMs = () => this.monotonicMs() + this.steady.aheadMs(this.wallUtcMs() - this.monotonicMs());
+  /** Another process looks at the clocks for the first time. */
+  forget(): void {
+    this.steady = new SteadyUtc(this.goesOn);
+  }
   after = (delayMs: number, task: () => void) => this.clock.after(delayMs, task);
 }
 
@@ -121,7 +134,7 @@ export class World {
     { seed, startUtcMs }: { seed: number; startUtcMs: number },
   ) {
     this.clock = new VirtualClock(startUtcMs, settle);
-    this.machineClock = new SteppingClock(this.clock);
+    this.machineClock = new SteppingClock(this.clock, () => this.supervisor?.drives() ?? false);
     this.store = new SimulatedStore(start);
     this.room = new Room(this.machineClock);
     this.arm = start.arm;
@@ -252,6 +265,7 @@ export class World {
 
   private openServer(): RigSupervisor {
     this.epoch += 1;
+    this.machineClock.forget();
     const link = createLink({
       factory: this.controller.factory,
       clock: this.machineClock,

@@ -218,7 +218,7 @@ export class FakeLink implements TurntableLink {
     return this.going === null ? (this.angleDeg ?? 0) : this.going.timeline((this.clock.utcMs() - this.going.beganUtcMs) / 1000);
   }
 
-  private at(utcMs = this.clock.utcMs()): Instant {
+  at(utcMs = this.clock.utcMs()): Instant {
     return { utcMs, uS: 0.0002 };
   }
 
@@ -286,7 +286,7 @@ export class FakeLink implements TurntableLink {
     this.going = null;
   }
 
-  private say(event: LinkEvent): void {
+  say(event: LinkEvent): void {
     if ('commandId' in event && event.kind !== 'standstill') this.ring.push(event);
     if (this.up) this.tell(event);
     else this.unsaid.push(event);

@@ -119,6 +119,22 @@ describe('the arm ends while the run is under way', () => {
   });
 });
 
+describe('a clock steps while the run is under way: the arm lasts no longer for it', () => {
+  const arm = { name: 'Ada Quill', untilUtcMs: startUtcMs + 640_000 };
+
+  test.each([
+    ['the server’s is set ahead', 'host', 600_000, 'held'],
+    ['the server’s is set back', 'host', -600_000, 'finished'],
+    ['the controller’s jumps', 'controller', 600_000, 'finished'],
+  ] as const)('%s', async (_, clock, byMs, state) => {
+    const bench = await underWay(1, runStart(shortProtocol, { arm }));
+    bench.link.say({ kind: 'clock-stepped', at: { utcMs: bench.clock.utcMs(), uS: 0.001 }, clock, byMs });
+    await bench.pass(320);
+    expect(bench.driver.facts().state).toBe(state);
+    expect(bench.store.events.find(({ kind }) => kind === 'clock-stepped')?.data).toEqual({ clock, byMs });
+  });
+});
+
 describe('somebody ends the arm while the run is under way', () => {
   const moments = [
     ['in homing', 0.02],
