@@ -26,7 +26,7 @@ if (strange.length > 0) giveUp(`no soak called ${strange.join(', ')}; there are:
 
 await ensureNodeModules();
 const chosen = names.length > 0 ? names : known;
-const onDatabase = chosen.some((name) => ['r3', 'r5'].includes(name));
+const onDatabase = chosen.some((name) => ['r3', 'r5', 'r7'].includes(name));
 if (onDatabase) await ensureDebianPackages(['postgresql']);
 const cluster = onDatabase ? await startCluster('bench') : null;
 const env = { ...process.env, ...(cluster === null ? {} : { EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres') }) };

@@ -1,9 +1,7 @@
-import { fork, type ChildProcess } from 'node:child_process';
 import { once } from 'node:events';
-import { join } from 'node:path';
 import { addMembers } from './lib/people';
 import { withServerHere, type ServerHere } from './lib/server-here';
-import type { StoppingSetting, StopSent } from './lib/stopping';
+import { child, ended, stopRuns } from './lib/stop-runs';
 import { quantile, report } from './report';
 
 /**
@@ -17,32 +15,11 @@ const pages = 100;
 const viewers = 20;
 const wireMs = (16 * 10_000) / 115_200;
 
-const child = (name: string, argument: string): ChildProcess =>
-  fork(join(__dirname, 'lib', `${name}.ts`), [argument], { execArgv: ['--import', 'tsx'] });
-
-async function ended(process_: ChildProcess): Promise<void> {
-  const [code] = (await once(process_, 'exit')) as [number | null];
-  if (code !== 0) throw new Error('a process of the benchmark failed');
-}
-
-/** Lets another process stop runs; the time from each stop sent to the first bytes of it on the line, ms. */
-async function stopRuns(setting: StoppingSetting, writtenNs: readonly bigint[]): Promise<number[]> {
-  const stopping = child('stopping', JSON.stringify(setting));
-  const sent: bigint[] = [];
-  stopping.on('message', (message) => void sent.push(BigInt((message as StopSent).sentNs)));
-  await ended(stopping);
-  return sent.map((from) => {
-    const at = writtenNs.find((ns) => ns >= from);
-    if (at === undefined) throw new Error('a stop never came to the line');
-    return Number(at - from) / 1e6;
-  });
-}
-
 async function measure({ database, address }: ServerHere, writtenNs: readonly bigint[]): Promise<void> {
   const [[cookie], followers] = [await addMembers(database, 'operator'), await addMembers(database, 'viewer', viewers)];
   const latency = (name: string, values: number[], goal: number) =>
     report({ name: `stop-latency ${name}`, value: quantile(values, 0.99), unit: 'ms p99', goal, want: 'at most', peer: wireMs });
-  const setting = { address, cookie, viewers: followers, stops };
+  const setting = { address, cookie, viewers: followers, stops, times: 1 };
   latency('idle', await stopRuns({ ...setting, pages: 0 }, writtenNs), 50);
   const copying = child('copying', database.url);
   await once(copying, 'message');

@@ -1,6 +1,7 @@
 import { mkdtempSync, rmSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
+import { connect } from '@/db/connect';
 import { decodeLine, type Request } from '@/firmware-protocol/codec';
 import { buildServer, type BuiltServer } from '@/server/boot/build-server';
 import { readConfig } from '@/server/boot/config';
@@ -40,9 +41,16 @@ function watchedController(clock: RealClock, rig: StationRig, ear: Ear): Simulat
   return { ...controller, factory: { ...factory, open } };
 }
 
+interface HereSetting {
+  ear: Ear;
+  prepare?: (database: BenchDatabase) => Promise<void>;
+  /** Another address of the database, for the server alone. */
+  through?: (url: string) => string;
+}
+
 /** Runs `work` on such a server, of which `prepare` may fill the database before it starts, and tidies up. */
 export async function withServerHere(
-  { ear, prepare = async () => undefined }: { ear: Ear; prepare?: (database: BenchDatabase) => Promise<void> },
+  { ear, prepare = async () => undefined, through }: HereSetting,
   work: (here: ServerHere) => Promise<void>,
 ): Promise<void> {
   const stateDir = mkdtempSync(join(tmpdir(), 'evenfall-bench-server-'));
@@ -56,13 +64,15 @@ export async function withServerHere(
         PORT: '0',
         EVENFALL_STATE_DIR: stateDir,
         EVENFALL_WEB_DIR: 'none',
-        EVENFALL_LOG_LEVEL: 'error',
+        // A server whose database is taken away has much to say.
+        EVENFALL_LOG_LEVEL: through === undefined ? 'error' : 'silent',
         EVENFALL_REQUESTS_PER_MINUTE: '1000000',
         EVENFALL_INTERVENTIONS_PER_MINUTE: '1000000',
       });
       const clock = new RealClock();
+      const own = through === undefined ? database.connection : connect({ url: through(database.url), maxConnections: 10 });
       const server = buildServer({
-        ...{ database: database.connection, clock },
+        ...{ database: own, clock },
         // Nobody has to leave the room.
         config: { ...config, virtualExitDelayS: 0 },
         overrides: { controllerOf: (rig) => watchedController(clock, rig, ear) },
@@ -70,6 +80,7 @@ export async function withServerHere(
       const address = await server.listen();
       await server.start();
       await work({ server, address, database, clock }).finally(() => server.stop());
+      if (own !== database.connection) await own.close();
     });
   } finally {
     rmSync(stateDir, { recursive: true, force: true });
