@@ -33,7 +33,7 @@ export function registeredWords(
 export const softwareWords = (version: string | null): string =>
   version === null ? 'The version of the software was not kept' : `Software Evenfall ${version}`;
 
-const knownUnits: Record<string, string> = { reversal_rad: 'rad', period_s: 's', decayTime_s: 's' };
+const knownUnits: Record<string, string> = { reversal_rad: 'rad', modulation_rad: 'rad', period_s: 's', decayTime_s: 's' };
 
 /** Unit of a budget line: that of the rig's quantity at the path. */
 export function unitOfInput(input: string, rig: RigDocument | null): string {

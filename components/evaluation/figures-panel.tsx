@@ -3,9 +3,9 @@ import { Label, Panel } from '@/components/ui';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { UncertainText } from './uncertain-text';
 
-/** Near − far, period, decay time, κ and the clock offset, each with its uncertainty. */
+/** Near − far or the swing of a modulation, period, decay time, κ and the clock offset, each with its uncertainty. */
 export function FiguresPanel({ result }: { result: EvaluationResult }) {
-  const { reversal_rad: reversal, period_s: period, decayTime_s: decay, kappa_N_m: kappa, alignment } = result;
+  const { reversal_rad: reversal, period_s: period, decayTime_s: decay, kappa_N_m: kappa, alignment, modulation } = result;
   const offset = alignment?.clockOffset_s ?? null;
   return (
     <Panel className="flex-row flex-wrap gap-x-8 gap-y-4" testID="figures">
@@ -14,6 +14,14 @@ export function FiguresPanel({ result }: { result: EvaluationResult }) {
           name={`near − far, ${reversal.count} reversal${reversal.count === 1 ? '' : 's'}`}
           value={reversal.value * 1e3}
           u={reversal.u === null ? null : reversal.u * 1e3}
+          unit="mrad"
+        />
+      )}
+      {modulation === undefined ? null : (
+        <Figure
+          name={`at twice the turntable's angle, ${modulation.turns} turn${modulation.turns === 1 ? '' : 's'}`}
+          value={modulation.amplitude_rad.value * 1e3}
+          u={modulation.amplitude_rad.u === null ? null : modulation.amplitude_rad.u * 1e3}
           unit="mrad"
         />
       )}

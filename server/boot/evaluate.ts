@@ -4,7 +4,6 @@ import { UnusableArchive } from '@/shared/archive/unusable-archive';
 import { evaluateArchive } from '@/shared/evaluation/evaluate-archive';
 import { evaluationMethods, type EvaluationMethod, type EvaluationOptions } from '@/shared/evaluation/registration';
 import type { EvaluationResult } from '@/shared/evaluation/result';
-import { NotYetError } from '@/shared/lib/not-yet-error';
 import { readArchiveFiles } from '../evaluation/archive-files';
 import { sha256Hex } from '../evaluation/sha256';
 import { createTrialCrew } from './parallel-trials';
@@ -65,7 +64,7 @@ function methodOf(name: string): EvaluationMethod {
   return method;
 }
 
-/** Evaluates the archive at a path, with Monte Carlo trials. @throws UnusableArchive, NotYetError */
+/** Evaluates the archive at a path, with Monte Carlo trials. @throws UnusableArchive */
 async function evaluatePath(path: string, chosen: EvaluationOptions = {}, trials = usualTrials): Promise<EvaluationResult> {
   const crew = createTrialCrew(trials);
   try {
@@ -90,8 +89,7 @@ export async function main(args: readonly string[], output: Output = toProcess):
     output.out(`${JSON.stringify(await evaluatePath(path, chosen, trials), null, 2)}\n`);
     return 0;
   } catch (error) {
-    if (error instanceof NotYetError) output.err(`evaluate: ${error.message} [${error.code}]\n`);
-    else if (error instanceof UnusableArchive || error instanceof UnusableArguments) output.err(`evaluate: ${error.message}\n`);
+    if (error instanceof UnusableArchive || error instanceof UnusableArguments) output.err(`evaluate: ${error.message}\n`);
     else throw error;
     return 2;
   }

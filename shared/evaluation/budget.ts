@@ -18,7 +18,7 @@ export interface BudgetQuestion {
 }
 
 export interface ObservedTerm {
-  input: 'reversal_rad' | 'period_s' | 'decayTime_s';
+  input: 'reversal_rad' | 'modulation_rad' | 'period_s' | 'decayTime_s';
   known: Known;
   sensitivity: number;
 }

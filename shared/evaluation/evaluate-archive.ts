@@ -9,7 +9,8 @@ import { controlTest } from './empty-control';
 import { regressionsOf, type Regressions } from './environment';
 import type { Known } from './free-oscillator';
 import type { Budget } from './budget';
-import { budgetFor, kappaU, periodBudget, trialModelOf } from './g-budget';
+import { budgetFor, kappaU, modulationBudget, periodBudget, trialModelOf } from './g-budget';
+import { modulationOutcome } from './modulation-method';
 import { periodOutcome } from './period-method';
 import { monteCarlo, type TrialModel } from './monte-carlo';
 import { pretendOf } from './pretend';
@@ -29,15 +30,16 @@ export interface Evaluation {
 }
 
 /**
- * Evaluates a verified archive by the equilibrium method: dwell fits, drift-free difference, κ and G with the linear budget.
- * @throws UnusableArchive saying which file and row, and why; NotYetError for what this version does not do.
+ * Evaluates a verified archive by the method that the options or the protocol name: dwell fits or harmonics, κ, and G with its budget.
+ * @throws UnusableArchive saying which file and row, and why.
  */
 export function evaluateArchive(archive: Archive, options: EvaluationOptions = {}): Evaluation {
   const plan = evaluationPlan(archive, options);
   const analysis = analysisOf(archive, plan);
   const { reversal } = analysis;
-  const { solution, free, budget, trialModel } = plan.method === 'period' ? byPeriod(archive, analysis) : byEquilibria(archive, analysis);
-  const { regressions, warnings } = plan.method === 'period' ? nothing : regressionsOf(archive, plan, { analysis, budget });
+  const { solution, free, budget, trialModel, clockOffset, modulation } = foundBy(archive, plan, analysis);
+  const byDwells = plan.method === 'equilibrium' || plan.method === 'acceleration';
+  const { regressions, warnings } = byDwells ? regressionsOf(archive, plan, { analysis, budget }) : nothing;
   const u = budget?.u ?? null;
   const kappa = { value: inertiaKgM2(archive.rig) * free.omega0Squared.value, u: kappaU(archive.rig, free.omega0Squared) };
   const result: EvaluationResult = {
@@ -45,7 +47,7 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     method: plan.method,
     registered: plan.differences === null ? null : plan.differences.length === 0,
     chain: archive.chain,
-    alignment: alignmentOf(analysis),
+    alignment: alignmentOf({ clockOffset }),
     period_s: withU(free.period),
     decayTime_s: free.decayTime === null ? null : withU(free.decayTime),
     kappa_N_m: kappa,
@@ -59,19 +61,32 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     },
     budget: budget?.lines ?? null,
     monteCarlo: trialModel === null ? null : monteCarlo(trialModel, options.trials ?? 0),
-    ...(hasSwings(archive) ? {} : { pretend: pretendOf(analysis) }),
+    ...(modulation === undefined ? {} : { modulation }),
+    ...(hasSwings(archive) || !byDwells ? {} : { pretend: pretendOf(analysis) }),
     ...(regressions.length === 0 ? {} : { regressions }),
-    warnings: [...archive.warnings, ...registrationWarnings(archive, plan), ...warningsOf(archive, analysis), ...warnings],
+    warnings: [
+      ...archive.warnings,
+      ...registrationWarnings(archive, plan),
+      ...warningsOf(archive, { ...analysis, clockOffset }),
+      ...warnings,
+    ],
   };
   return { result, curves: curvesOf(analysis), trialModel };
 }
 
-/** The time of swing looks at no difference of the dwells. */
+/** Other methods look at no difference of the dwells. */
 const nothing: Regressions = { regressions: [], warnings: [] };
 
-interface Found extends Pick<Analysis, 'solution' | 'free'> {
+interface Found extends Pick<Analysis, 'solution' | 'free' | 'clockOffset'> {
   budget: Budget | null;
   trialModel: TrialModel | null;
+  modulation?: EvaluationResult['modulation'];
+}
+
+function foundBy(archive: Archive, plan: EvaluationPlan, analysis: Analysis): Found {
+  if (plan.method === 'period') return byPeriod(archive, analysis);
+  if (plan.method === 'modulation') return byModulation(archive, plan.channel, analysis);
+  return byEquilibria(archive, analysis);
 }
 
 function byEquilibria({ rig }: Archive, analysis: Analysis): Found {
@@ -86,14 +101,30 @@ function byPeriod({ rig }: Archive, analysis: Analysis): Found {
   const omega0Squared = { ...analysis.free.omega0Squared, value: solution.omega0Squared };
   return {
     solution,
+    clockOffset: analysis.clockOffset,
     free: { ...analysis.free, period, omega0Squared },
     budget,
     trialModel: trialModelOf(rig, budget, { solution }),
   };
 }
 
+function byModulation(archive: Archive, channel: string, analysis: Analysis): Found {
+  const outcome = modulationOutcome(archive, channel, analysis);
+  const { solution, clockOffset, turns, amplitudeRad } = outcome;
+  const budget = modulationBudget(archive.rig, outcome, analysis);
+  const u = budget?.terms.find(({ line }) => line.input === 'modulation_rad')?.line.u ?? null;
+  return {
+    solution,
+    free: analysis.free,
+    clockOffset,
+    budget,
+    trialModel: trialModelOf(archive.rig, budget, { solution }),
+    modulation: { turns, amplitude_rad: { value: amplitudeRad, u } },
+  };
+}
+
 /** The offset is applied where it is more than twice its uncertainty. */
-function alignmentOf({ clockOffset }: Analysis): EvaluationResult['alignment'] {
+function alignmentOf({ clockOffset }: Pick<Analysis, 'clockOffset'>): EvaluationResult['alignment'] {
   const applied = clockOffset !== null && Math.abs(clockOffset.value) > 2 * clockOffset.u;
   return { clockOffset_s: clockOffset, applied };
 }

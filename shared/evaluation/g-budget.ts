@@ -13,6 +13,7 @@ import { reread } from './channel-scale';
 import type { Known } from './free-oscillator';
 import { gSystem } from './g-system';
 import type { TrialModel } from './monte-carlo';
+import type { ModulationOutcome } from './modulation-method';
 import type { PeriodOutcome } from './period-method';
 import { centreOf } from './ring-down-fit';
 import { NoSolutionError, solveG } from './solve-g';
@@ -44,6 +45,35 @@ export function periodBudget(rig: RigDocument, outcome: PeriodOutcome, segments:
   const sensitivity = period.u === 0 ? 0 : statistical.u / period.u;
   const observed: ObservedTerm[] = [{ input: 'period_s', known: { ...period, nu: statistical.nu }, sensitivity }];
   return budgetOf({ rig, bigG: solution.bigG, gOf, stations, lever: false, observed, axisOffset: null });
+}
+
+/** The budget of G by modulation: what the turns leave open stands in the line of the amplitude. Null with fewer than two turns. */
+export function modulationBudget(rig: RigDocument, outcome: ModulationOutcome, { free, scale }: Analysis): Budget | null {
+  const { solution, statistical, amplitudeRad, gOf } = outcome;
+  if (statistical === null) return null;
+  const { period, decayTime } = free;
+  const decayTimeS = decayTime === null ? {} : { decayTimeS: decayTime.value };
+  const byAmplitude = solution.bigG / amplitudeRad;
+  const observed: ObservedTerm[] = [
+    {
+      input: 'modulation_rad',
+      known: { value: amplitudeRad, u: statistical.u / Math.abs(byAmplitude), nu: statistical.nu },
+      sensitivity: byAmplitude,
+    },
+    {
+      input: 'period_s',
+      known: period,
+      sensitivity: derivative((step) => gOf({ periodS: period.value + step, ...decayTimeS }), relativeStep * period.value),
+    },
+  ];
+  if (decayTime !== null)
+    observed.push({
+      input: 'decayTime_s',
+      known: decayTime,
+      sensitivity: derivative((step) => gOf({ periodS: period.value, decayTimeS: decayTime.value + step }), relativeStep * decayTime.value),
+    });
+  const lever = scale.kind === 'spot';
+  return budgetOf({ rig, bigG: solution.bigG, gOf: (supposed) => gOf({ rig: supposed }), stations: [], lever, observed, axisOffset: null });
 }
 
 const relativeStep = 1e-4;

@@ -1,7 +1,6 @@
 import type { Archive } from '../archive/read-archive';
 import { listOf } from '../archive/read-archive';
 import { UnusableArchive } from '../archive/unusable-archive';
-import { NotYetError } from '../lib/not-yet-error';
 import { registeredDifferences } from './registered-differences';
 
 export type EvaluationMethod = 'equilibrium' | 'period' | 'acceleration' | 'modulation';
@@ -28,13 +27,11 @@ export interface EvaluationPlan {
 
 /**
  * Options first, then what the protocol registered, then the defaults.
- * @throws NotYetError for methods and drift models that are not built; UnusableArchive when the channel is not plain.
+ * @throws UnusableArchive when the channel is not plain.
  */
 export function evaluationPlan(archive: Archive, options: EvaluationOptions): EvaluationPlan {
   const registered = archive.registered;
   const method = options.method ?? registered?.method ?? 'equilibrium';
-  if (method === 'modulation')
-    throw new NotYetError('the method "modulation" is not built yet; "equilibrium", "acceleration" and "period" are');
   const drift = registered?.drift ?? 'aba';
   const channel = chooseChannel(archive, options.channel ?? registered?.channel ?? null);
   const differences = registered === undefined || registered === null ? null : registeredDifferences(registered, { method, channel });

@@ -83,6 +83,10 @@ export const evaluationResultSchema = z.strictObject({
   monteCarlo: z
     .strictObject({ trials: z.number().int(), G_mean: z.number(), G_u: z.number(), interval95: z.tuple([z.number(), z.number()]) })
     .nullable(),
+  /** Of the modulation method alone: whole turns that were looked at, and half the swing at twice the turntable's angle. */
+  modulation: z
+    .strictObject({ turns: z.number().int(), amplitude_rad: z.strictObject({ value: z.number(), u: z.number().nullable() }) })
+    .optional(),
   pretend: pretendResultSchema.nullable().optional(),
   /** Absent where no channel of the surroundings could be compared. */
   regressions: z.array(regressionResultSchema).optional(),

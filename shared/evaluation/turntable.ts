@@ -4,6 +4,7 @@ import type { RigDocument } from '../rig/document';
 /** The turntable's angle during a run, as the step log tells it. */
 
 interface Move {
+  kind: StepRow['kind'];
   startUtcMs: number;
   endUtcMs: number;
   fromDeg: number;
@@ -16,7 +17,7 @@ const moving = new Set<StepRow['kind']>(['swing', 'kick', 'rotate']);
 function movesOf(steps: readonly StepRow[]): Move[] {
   return steps.flatMap(({ kind, startUtcMs, endUtcMs, angleStartDeg, angleEndDeg }) =>
     moving.has(kind) && endUtcMs !== null && angleStartDeg !== null && angleEndDeg !== null
-      ? [{ startUtcMs, endUtcMs, fromDeg: angleStartDeg, toDeg: angleEndDeg }]
+      ? [{ kind, startUtcMs, endUtcMs, fromDeg: angleStartDeg, toDeg: angleEndDeg }]
       : [],
   );
 }
@@ -31,12 +32,15 @@ function covered(x: number, r: number): number {
   return peak * (x - r / 2);
 }
 
-/** Ramps of a move of known length and time at the rig's acceleration; half the time each where that would not do. */
-function rampShare({ startUtcMs, endUtcMs, fromDeg, toDeg }: Move, rig: RigDocument): number {
+/**
+ * Ramps of a move of known length and time at the rig's acceleration; half the time each where that would not do. Where nobody knows the
+ * acceleration, a third of a swing each and nothing of a rotation.
+ */
+export function rampShare({ kind, startUtcMs, endUtcMs, fromDeg, toDeg }: Move, rig: RigDocument): number {
   const durationS = (endUtcMs - startUtcMs) / 1000;
   const acceleration = rig.motion?.maxAcceleration_deg_s2;
   const distance = Math.abs(toDeg - fromDeg);
-  if (acceleration === undefined || !(durationS > 0)) return 1 / 3;
+  if (acceleration === undefined || !(durationS > 0)) return kind === 'rotate' ? 0 : 1 / 3;
   const root = (acceleration * durationS) ** 2 - 4 * acceleration * distance;
   if (root <= 0) return 0.5;
   const speed = (acceleration * durationS - Math.sqrt(root)) / 2;

@@ -16,18 +16,9 @@ export function isBuilt(kind: Step['kind']): boolean {
 
 /** Everything in the document that this version does not carry out, with the step's path and what can be used instead. */
 export function notYet(document: ProtocolDocument): Finding[] {
-  return [
-    ...documentNotYet(document),
-    ...[...walkSteps(document.steps)].flatMap(({ step, path }) => stepNotYet(step).map((message) => finding(path, message))),
-  ];
-}
-
-const finding = (path: string | null, message: string): Finding => ({ code: 'not-yet', path, message });
-
-function documentNotYet({ evaluation }: ProtocolDocument): Finding[] {
-  return evaluation?.method === 'modulation'
-    ? [finding('evaluation', 'The evaluation method "modulation" is not built yet. Use "equilibrium", "acceleration" or "period".')]
-    : [];
+  return [...walkSteps(document.steps)].flatMap(({ step, path }) =>
+    stepNotYet(step).map((message): Finding => ({ code: 'not-yet', path, message })),
+  );
 }
 
 function stepNotYet(step: Step): string[] {

@@ -29,5 +29,4 @@ export async function workEvaluation(services: Services, job: Job): Promise<void
 }
 
 /** The data are at fault, not the program: trying again gives the same. */
-const isUnusable = (error: unknown) =>
-  error instanceof Error && (error.name === 'UnusableArchive' || ('code' in error && error.code === 'not-yet'));
+const isUnusable = (error: unknown) => error instanceof Error && error.name === 'UnusableArchive';

@@ -69,7 +69,7 @@ describe('evaluate', () => {
     ['two paths', ['a', 'b'], 'name one archive'],
     ['an unknown option', [folder, '--colour'], "Unknown option '--colour'"],
     ['an unknown method', [folder, '--method', 'guess'], '--method guess: there are equilibrium'],
-    ['a method that is not built', [folder, '--method', 'modulation'], '[not-yet]'],
+    ['modulation where nothing turned', [folder, '--method', 'modulation'], 'steps.csv: the method "modulation" needs a rotation'],
     ['a bound that is none', [folder, '--bound', 'wide'], '--bound wide: a positive angle'],
     ['trials that are none', [folder, '--trials', '-5'], '--trials'],
     ['a channel that is not there', [folder, '--channel', 'laser'], 'there is no channel "laser"'],

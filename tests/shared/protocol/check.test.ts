@@ -204,10 +204,6 @@ describe('what is not built yet is valid in the format and refused as not-yet', 
     expect(places([home, step])).toEqual([`not-yet ${path}`]);
   });
 
-  test.each([['another method', { evaluation: { method: 'modulation' as const } }, 'evaluation']])('%s', (_, more, path) => {
-    expect(checkProtocol(protocol([home, dwell], more), demoRigWide)).toEqual([expect.objectContaining({ code: 'not-yet', path })]);
-  });
-
   test('what is built of these fields is accepted', () => {
     expect(
       checkProtocol(
