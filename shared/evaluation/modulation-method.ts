@@ -183,7 +183,7 @@ function exactMotion(
     angleRad: angleRad + a * c + b * s,
     speedRadS: slope * rotation.speedRadS + a * (-gamma * c - omega * s) + b * (-gamma * s + omega * c),
   };
-  const exact = new Pendulum({ ...pendulum, bigG }, initial, startS, periodS / stepsPerPeriod);
+  const exact = new Pendulum({ ...pendulum, bigG, stepInMotionS: periodS / stepsPerPeriod }, initial, startS);
   return t.map((atS, i) => {
     if (i > 0) exact.advanceTo(atS, phiAt);
     return exact.angleRad;

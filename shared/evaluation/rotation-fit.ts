@@ -90,7 +90,7 @@ export interface FitChoice {
 
 /** @throws SingularMatrixError where too little of the record is there */
 export function fitRotation(record: RotationRecord, { y, columns, trust }: FitChoice): RotationFit {
-  const { averages, pieces, pieceOf } = record;
+  const { averages, pieces } = record;
   const root = averages.weight.map((weight, i) => Math.sqrt(weight * (trust?.[i] ?? 1)));
   const weighed = (column: Float64Array) => column.map((value, i) => value * (root[i] as number));
   const drift = Array.from({ length: pieces }, (_, piece) => driftColumns(record, piece)).flat();

@@ -12,6 +12,8 @@ export interface PendulumSetting {
   geometry: TorqueGeometry;
   oscillator: Pick<Oscillator, 'periodS' | 'kappa' | 'inertiaKgM2' | 'gamma'>;
   bigG: number;
+  /** Greatest step while the sources turn, s: a longer one than usual is for a motion without corners. */
+  stepInMotionS?: number;
 }
 
 /** I θ̈ + 2 I γ θ̇ + κ θ = G g(φ − θ), with the exact torque g of the sources, by the classical Runge-Kutta rule. */
@@ -21,12 +23,11 @@ export class Pendulum {
   /** Seconds since the start up to which it is worked out. */
   atS: number;
 
-  /** From `atS` on, s. A longer step in motion is for a motion without corners. */
+  /** From `atS` on, s. */
   constructor(
     private readonly setting: PendulumSetting,
     initial: { angleRad: number; speedRadS: number },
     atS = 0,
-    private readonly stepInMotionS = STEP_IN_MOTION_S,
   ) {
     this.atS = atS;
     this.angleRad = initial.angleRad;
@@ -47,7 +48,7 @@ export class Pendulum {
     const middle = phiAt(fromS + h / 2);
     const to = phiAt(fromS + h);
     const turning = from !== middle || middle !== to;
-    const parts = turning ? Math.ceil(h / this.stepInMotionS - TINY) : 1;
+    const parts = turning ? Math.ceil(h / (this.setting.stepInMotionS ?? STEP_IN_MOTION_S) - TINY) : 1;
     if (parts <= 1) return this.step(h, { from, middle, to });
     for (let part = 0; part < parts; part += 1) {
       const at = (place: number) => phiAt(fromS + (h * place) / parts);

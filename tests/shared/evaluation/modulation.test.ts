@@ -54,7 +54,7 @@ describe('the steady answer to sources that turn', () => {
     const speed = (2 * Math.PI) / 900;
     const steady = steadyRotation(setting, speed);
     const { angleRad, slope } = steadyAt(steady, 0.3);
-    const pendulum = new Pendulum(setting, { angleRad, speedRadS: slope * speed }, 0, 0.5);
+    const pendulum = new Pendulum({ ...setting, stepInMotionS: 0.5 }, { angleRad, speedRadS: slope * speed });
     pendulum.advanceTo(450, (atS) => 0.3 + speed * atS);
     expect(Math.abs(pendulum.angleRad - angleRad)).toBeLessThan(1e-8 * Math.abs(steady.sine[0] as number));
   });
@@ -106,7 +106,10 @@ describe('with noise', () => {
 
   test('a minute of 200 µrad does no harm', () => {
     const burst = (tS: number) => (tS > 2000 && tS < 2060 ? 2e-4 : 0);
-    const { value, u } = evaluated({ ...base, rig, reading: (angle, tS) => angle + burst(tS) + 5e-6 * normal() }).G as { value: number; u: number };
+    const { value, u } = evaluated({ ...base, rig, reading: (angle, tS) => angle + burst(tS) + 5e-6 * normal() }).G as {
+      value: number;
+      u: number;
+    };
     expect(Math.abs(value - trueG)).toBeLessThan(4 * u);
     expect(u).toBeLessThan(2 * (noisy.G?.u ?? 0));
   });
