@@ -1,33 +1,8 @@
 import { View } from 'react-native';
 import { Body, Label, Num } from '@/components/ui';
 import { formatPercent } from '@/shared/lib/format-number';
+import { inputWords } from '@/shared/evaluation/input-words';
 import type { BudgetLine } from '@/shared/evaluation/result';
-
-const inWords: Record<string, string> = {
-  reversal_rad: 'near − far, scatter of dwells',
-  period_s: 'period',
-  decayTime_s: 'decay time',
-  'sources.orbit': 'orbit of the sources',
-  'sources.mass': 'mass of a source',
-  'sources.radius': 'radius of a source',
-  'sources.offset': 'height of the sources',
-  'pendulum.arm': 'arm of the pendulum',
-  'pendulum.ballMass': 'mass of a ball',
-  'pendulum.ballRadius': 'radius of a ball',
-  'pendulum.beamMass': 'mass of the beam',
-  'pendulum.beamLength': 'length of the beam',
-  'pendulum.extraInertia': 'extra inertia',
-  'lever.distance': 'mirror to scale',
-  'lever.zero': 'zero of the scale',
-  'axis.offset': 'turntable axis to fibre',
-  'stations.near': 'angle of near',
-  'stations.far': 'angle of far',
-  'measured.period_s': 'period, sources away',
-  'measured.decayTime_s': 'decay time, sources away',
-};
-
-/** What an input of the budget is called on screens; the path itself where there is no word for it. */
-export const inputWords = (input: string): string => inWords[input] ?? input;
 
 /** The budget as bars, greatest share first; the smallest ones in one line. */
 export function BudgetBars({ lines, limit = 8 }: { lines: readonly BudgetLine[]; limit?: number }) {

@@ -3,7 +3,7 @@ export { stepsOfLog, stepsOfPlan, standsOf, laneOf, type Lane, type PlannedStep,
 export { nowWindow, wholeWindow, type StripWindow } from './strip-geometry';
 export { PlanView } from './plan-view';
 export { GScale } from './g-scale';
-export { BudgetBars, inputWords } from './budget-bars';
+export { BudgetBars } from './budget-bars';
 export { FitPlot } from './fit-plot';
 export { ReversalPlot } from './reversal-plot';
 export { TorquePlot } from './torque-plot';

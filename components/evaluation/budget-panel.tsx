@@ -1,7 +1,8 @@
 import { useState } from 'react';
 import { View } from 'react-native';
-import { BudgetBars, inputWords } from '@/components/charts';
+import { BudgetBars } from '@/components/charts';
 import { Body, Button, Label, Num, Section } from '@/components/ui';
+import { inputWords } from '@/shared/evaluation/input-words';
 import type { BudgetLine } from '@/shared/evaluation/result';
 import { formatPercent } from '@/shared/lib/format-number';
 import { formatUncertain, uncertainParts } from '@/shared/lib/format-uncertain';

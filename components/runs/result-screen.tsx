@@ -1,19 +1,24 @@
-import { useMemo } from 'react';
+import { useEffect, useMemo } from 'react';
 import { View } from 'react-native';
 import type { Href } from 'expo-router';
-import { addressOf, useLab, useLabQuery } from '@/components/api';
+import { addressOf, useLab, useLabQuery, wordsOf } from '@/components/api';
 import { stepsOfLog, SwingStrip } from '@/components/charts';
 import { EvaluatePanel } from '@/components/evaluation/evaluate-panel';
 import { registeredWords } from '@/components/evaluation/evaluation-words';
 import { GPanel } from '@/components/evaluation/g-panel';
-import { UncertainText } from '@/components/evaluation/uncertain-text';
 import { useEvaluations } from '@/components/evaluation/use-evaluations';
-import { Body, Chip, Icon, Label, Num, Panel, Screen, useWide } from '@/components/ui';
+import { NightFigures } from '@/components/morning/believe';
+import { NearFar, Pendulum } from '@/components/morning/nights';
+import { RigNow } from '@/components/morning/rig-now';
+import { WhatNext, WorstMoments } from '@/components/morning/what-next';
+import { Body, Chip, Icon, Label, Loading, Panel, ProblemNotice, Screen, useWide } from '@/components/ui';
 import { readSamples } from '@/shared/contracts/data';
+import { readMorning } from '@/shared/contracts/morning';
 import { downloadArchive, listSteps, type RunView, type StepRowView } from '@/shared/contracts/runs';
-import type { EvaluationResult } from '@/shared/evaluation/result';
 import { formatDuration } from '@/shared/lib/format-duration';
+import { formatPercent } from '@/shared/lib/format-number';
 import { formatDay, zoneName } from '@/shared/lib/format-time';
+import { planWords } from '@/shared/morning/words';
 import { toRad } from './deflection-series';
 import { DownloadLink } from './download-link';
 import { stagesOf } from './intervention';
@@ -30,6 +35,8 @@ export function ResultScreen({ view }: { view: RunView }) {
   const rows = steps.data?.data.items ?? [];
   const evaluations = useEvaluations(view.id);
   const result = evaluations.done?.result ?? null;
+  const morning = useMorning(view.id, evaluations.done?.id ?? null);
+  const sheet = morning.data?.data ?? null;
   return (
     <Screen
       title={titleOf(view, timeZone)}
@@ -37,9 +44,12 @@ export function ResultScreen({ view }: { view: RunView }) {
       trailing={<Chip tone={view.rehearsal ? 'lamp' : 'dim'}>{view.rehearsal ? 'rehearsal' : view.rigName}</Chip>}
       testID="result-screen"
     >
-      <Headline view={view} timeZone={timeZone} />
+      <Headline view={view} plan={sheet === null ? '' : planWords(sheet, view.endedAt)} timeZone={timeZone} />
       <LastStages view={view} timeZone={timeZone} />
+      {view.rehearsal ? null : <RigNow rigId={view.rigId} timeZone={timeZone} />}
+      {sheet === null ? <SheetState morning={morning} /> : <NightFigures sheet={sheet} />}
       <WholeNight view={view} rows={rows} timeZone={timeZone} />
+      {sheet === null ? null : <NearFar sheet={sheet} rehearsal={view.rehearsal} timeZone={timeZone} />}
       {result === null ? (
         <EvaluatePanel runId={view.id} evaluations={evaluations} registeredChannel={view.protocol.evaluation?.channel ?? null} />
       ) : (
@@ -50,7 +60,15 @@ export function ResultScreen({ view }: { view: RunView }) {
           trueG={view.simulated?.trueG ?? null}
         />
       )}
-      <Figures view={view} rows={steps.data?.data.items ?? null} result={result} />
+      {sheet?.shares == null ? null : (
+        <Label testID="shares">
+          Of u²(G) the night has {formatPercent(Math.max(0, sheet.shares.night))}, the geometry of the rig{' '}
+          {formatPercent(Math.max(0, sheet.shares.geometry))}.
+        </Label>
+      )}
+      {sheet === null ? null : <WhatNext next={sheet.next} />}
+      {sheet === null ? null : <WorstMoments worst={sheet.worst} runId={view.id} timeZone={timeZone} />}
+      {sheet === null ? null : <Pendulum sheet={sheet} />}
       <PairsPanel runId={view.id} rows={rows} timeZone={timeZone} />
       <RunAlarms runId={view.id} startedAt={view.startedAt} rehearsal={view.rehearsal} />
       <Links runId={view.id} />
@@ -78,7 +96,27 @@ function titleOf(view: RunView, timeZone: string): string {
   return `${view.rehearsal ? 'Rehearsal' : 'Run'} of ${formatDay(start, timeZone)}`;
 }
 
-function Headline({ view, timeZone }: { view: RunView; timeZone: string }) {
+/** Read anew once another evaluation is there. */
+function useMorning(runId: string, evaluationId: string | null) {
+  const morning = useLabQuery(readMorning, { params: { runId } });
+  const { refetch } = morning;
+  useEffect(() => void (evaluationId === null ? undefined : refetch()), [evaluationId, refetch]);
+  return morning;
+}
+
+/** The rest of the page does not wait for the sheet, nor fall with it. */
+function SheetState({ morning }: { morning: ReturnType<typeof useMorning> }) {
+  if (!morning.isError) return <Loading label="Reading the night" />;
+  return (
+    <ProblemNotice
+      title="The morning sheet could not be made"
+      detail={wordsOf(morning.error).detail}
+      action={{ label: 'Try again', onPress: () => void morning.refetch() }}
+    />
+  );
+}
+
+function Headline({ view, plan, timeZone }: { view: RunView; plan: string; timeZone: string }) {
   const mark = stateMark(view.state);
   const lengthS = view.startedAt !== null && view.endedAt !== null ? (Date.parse(view.endedAt) - Date.parse(view.startedAt)) / 1000 : null;
   return (
@@ -92,6 +130,7 @@ function Headline({ view, timeZone }: { view: RunView; timeZone: string }) {
       <Label>
         {zoneName(timeZone)}
         {lengthS === null ? '' : `, after ${formatDuration(lengthS)}`}
+        {plan === '' ? '' : `, ${plan}`}
       </Label>
       {view.reason === '' ? null : <Body>{view.reason}</Body>}
     </View>
@@ -129,40 +168,6 @@ function WholeNight({ view, rows, timeZone }: { view: RunView; rows: readonly St
         heightPx={wide ? 170 : 130}
       />
       {data !== null && data.total === 0 ? <Label>No deflection data yet.</Label> : null}
-    </Panel>
-  );
-}
-
-/** `rows` is null until the step log is there: no dwell is called bad before. */
-function Figures({ view, rows, result }: { view: RunView; rows: readonly StepRowView[] | null; result: EvaluationResult | null }) {
-  const dwells = (rows ?? []).filter((row) => row.kind === 'dwell' && row.endUtcMs !== null);
-  const good = dwells.filter((row) => row.good !== false && row.outcome === 'done').length;
-  const reversal = result?.reversal_rad ?? null;
-  return (
-    <Panel className="flex-row flex-wrap gap-x-10 gap-y-4" testID="figures">
-      <View>
-        <Num size={20}>
-          {rows === null ? '–' : good} of {view.dwellsPlanned}
-        </Num>
-        <Label>good dwells</Label>
-      </View>
-      {reversal === null ? null : (
-        <View>
-          <UncertainText
-            size={20}
-            value={reversal.value * 1e3}
-            u={reversal.u === null ? null : reversal.u * 1e3}
-            options={{ exponent: 0 }}
-          />
-          <Label>mrad near − far</Label>
-        </View>
-      )}
-      {result?.period_s && result.dwells.some(({ used }) => used) ? (
-        <View>
-          <UncertainText size={20} {...result.period_s} />
-          <Label>s damped period</Label>
-        </View>
-      ) : null}
     </Panel>
   );
 }

@@ -1,5 +1,5 @@
 import { useLocalSearchParams, type Href } from 'expo-router';
-import { useMemo, useState } from 'react';
+import { useEffect, useMemo, useState } from 'react';
 import { View } from 'react-native';
 import { addressOf, useLab, useLabQuery, wordsOf } from '@/components/api';
 import { Empty, FilterGroup, Label, Loading, Panel, ProblemNotice, Screen, Select, Tabs, useWide } from '@/components/ui';
@@ -16,7 +16,7 @@ const everyMs = 4000;
 
 /** The step log of a run: what was planned, what happened, and how well the times are known. */
 export function StepLogScreen() {
-  const { runId } = useLocalSearchParams<{ runId: string }>();
+  const { runId, row } = useLocalSearchParams<{ runId: string; row?: string }>();
   const { labId, timeZone } = useLab();
   const run = useLabQuery(getRun, { params: { runId }, everyMs: everyMs * 2 });
   const over = run.data !== undefined && isOver(run.data.data.state);
@@ -42,17 +42,31 @@ export function StepLogScreen() {
         <Empty title="No steps yet">The first row appears when the run begins its first step.</Empty>
       ) : null}
       {rows.length === 0 ? null : (
-        <LoggedSteps rows={rows} events={events.data ?? []} protocol={run.data?.data.protocol ?? null} timeZone={timeZone} />
+        <LoggedSteps
+          rows={rows}
+          events={events.data ?? []}
+          protocol={run.data?.data.protocol ?? null}
+          timeZone={timeZone}
+          first={row === undefined ? null : Number(row)}
+        />
       )}
     </Screen>
   );
 }
 
-function LoggedSteps({ rows, events, protocol, timeZone }: Pick<StepListProps, 'rows' | 'events' | 'protocol' | 'timeZone'>) {
+interface LoggedStepsProps extends Pick<StepListProps, 'rows' | 'events' | 'protocol' | 'timeZone'> {
+  /** The row that a link leads to: open, and scrolled to. */
+  first: number | null;
+}
+
+function LoggedSteps({ rows, events, protocol, timeZone, first }: LoggedStepsProps) {
   const wide = useWide();
   const [filter, setFilter] = useState<StepFilter>(noFilter);
   const [zone, setZone] = useState<'lab' | 'utc'>('lab');
-  const [open, setOpen] = useState<number | null>(null);
+  const [open, setOpen] = useState<number | null>(first);
+  useEffect(() => {
+    if (first !== null) document.querySelector(`[data-testid="events-${first}"]`)?.scrollIntoView({ block: 'center' });
+  }, [first]);
   const shown = useMemo(() => filterSteps(rows, filter), [rows, filter]);
   const list = { rows: shown, events, protocol, base: { timeZone: zone === 'utc' ? null : timeZone }, timeZone, open, onOpen: setOpen };
   return (

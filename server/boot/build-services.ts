@@ -12,6 +12,7 @@ import { Reviews } from '../http/reviews';
 import type { Services } from '../http/services';
 import { AlarmWatch } from '../http/work/alarm-watch';
 import { workEvaluation } from '../http/work/evaluation-job';
+import { morningJobKind, workMorning } from '../http/work/morning-job';
 import { rehearsalJobKind, workRehearsal } from '../http/work/rehearsal-job';
 import { tellStarter } from '../http/work/tell-starter';
 import { AppendRates } from '../ingest/append-rate';
@@ -174,7 +175,11 @@ function buildCrew({ overrides = {} }: BuildParts, services: Services): JobCrew 
     pollMs: overrides.paceMs ?? usualPollMs,
     queueFor: (name) => createJobQueue(database.db, `${name} of process ${String(process.pid)}`, () => clock.utcMs()),
     crews: {
-      work: { [evaluationJobKind]: (job) => workEvaluation(services, job), [rehearsalJobKind]: (job) => workRehearsal(services, job) },
+      work: {
+        [evaluationJobKind]: (job) => workEvaluation(services, job),
+        [rehearsalJobKind]: (job) => workRehearsal(services, job),
+        [morningJobKind]: (job) => workMorning(services, job),
+      },
       mail: mailJobs({ db: database.db, clock, mail, newToken, sha256: sha256Hex }),
       calls: { ...alarmJobs(services.tell), ...runNoticeJobs(services.tell) },
     },

@@ -12,7 +12,7 @@ import { oneLine, tellPerson, type TellParts, worthAnotherTry } from './tell';
 /** What whoever started a run hears of it: that it began and until when nobody need worry, that it is held, and how it ended. */
 
 const runNoticeKind = 'run.notice';
-const topics = ['started', 'held', 'resumed', 'stopped', 'failed', 'finished', 'prompted', 'proved'] as const;
+const topics = ['started', 'held', 'resumed', 'stopped', 'failed', 'finished', 'prompted', 'proved', 'morning'] as const;
 const noticeSchema = z.strictObject({ labId: z.string(), runId: z.string(), topic: z.enum(topics), text: z.string() });
 export type RunNotice = z.infer<typeof noticeSchema>;
 
@@ -28,6 +28,7 @@ const titles: Record<RunNotice['topic'], string> = {
   finished: 'Finished',
   prompted: 'Waits for somebody',
   proved: 'First pair',
+  morning: 'Morning sheet',
 };
 
 export const runNoticeJobs = (parts: TellParts): JobHandlers => ({
@@ -74,6 +75,8 @@ export function paragraphsOf(
       return [`${oneLine(text)} The rig is disarmed. When it is done, arm it again at the rig and confirm on the page of the run.`];
     case 'proved':
       return [oneLine(text)];
+    case 'morning':
+      return text.split('\n').map(oneLine);
     case 'finished':
       return [
         `${oneLine(text)}${run.endedAt === null ? '' : ` The last step ended ${at(run.endedAt)}.`} Before you go in, look at the run: what moves, and whether the rig is armed.`,

@@ -7,6 +7,7 @@ import * as doors from './doors';
 import * as evaluations from './evaluations';
 import * as goingOn from './going-on';
 import * as link from './link';
+import * as morning from './morning';
 import * as people from './people';
 import * as protocols from './protocols';
 import * as reviews from './reviews';
@@ -33,6 +34,7 @@ export const routes: readonly RouteContract[] = [
   protocols,
   runs,
   goingOn,
+  morning,
   schedules,
   doors,
   data,

@@ -216,7 +216,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.at('result-screen').waitFor();
     await hand.reads('headline', /Stopped at \d\d:\d\d/);
     expect(await eventsOf(runId, 'stop-requested')).toHaveLength(1);
-    await hand.reads('figures', /^2 of 8/);
+    await hand.reads('good-dwells', /^2 of 8/);
     await hand.shoots('stopped');
   });
 

@@ -34,7 +34,10 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.at('result-screen').waitFor();
     expect(await hand.reads('headline', 'Finished at')).toMatch(/Finished at \d\d:\d\d/);
     expect(await hand.reads('headline')).toMatch(/Europe\/Zurich, after 56 min/);
-    await hand.reads('figures', /^4 of 4/);
+    await hand.reads('good-dwells', /^4 of 4 dwells are good/);
+    const ticks = await hand.reads('ticks', /Chain of \d+ events whole/);
+    expect(ticks).toMatch(/Home edge .*0\.\d{3}° allowed/);
+    expect(ticks).toMatch(/\d+\.\d % of the samples, longest gap/);
     await hand.hears('night-strip', /2 near dwells and 2 far dwells.*4 of 4 dwells done.*The solid line is the measured deflection/);
     await hand.shoots('result');
   });

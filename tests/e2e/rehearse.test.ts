@@ -32,7 +32,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.taps('rehearse-confirm');
     await hand.at('result-screen').waitFor({ timeout: 60_000 });
     expect(await hand.reads('headline', 'Finished')).toMatch(/after 2 h 48 min/);
-    await hand.reads('figures', /^12 of 12/);
+    await hand.reads('good-dwells', /^12 of 12/);
     await hand.hears('night-strip', /12 of 12 dwells done\. The solid line is the measured deflection/);
   });
 

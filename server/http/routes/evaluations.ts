@@ -2,13 +2,13 @@ import * as contracts from '@/shared/contracts/evaluations';
 import type { EvaluationView, ListedEvaluation } from '@/shared/contracts/evaluations';
 import type { Handle } from '@/server/store/database';
 import * as store from '@/server/store/evaluations';
-import { channelsOfRun, countSamples, findRun, type RunRecord } from '@/server/store/runs-read';
 import { assertEnded } from '../archive-input';
 import { audited } from '../audited';
+import { channelToEvaluate } from '../channel-to-evaluate';
 import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
-import type { Services } from '../services';
+import { loadRun } from '../run-view';
 
 const listViewOf = (evaluation: Omit<store.EvaluationRecord, 'curves'>): ListedEvaluation => ({
   id: evaluation.id,
@@ -29,12 +29,6 @@ const listViewOf = (evaluation: Omit<store.EvaluationRecord, 'curves'>): ListedE
 
 const viewOf = (evaluation: store.EvaluationRecord): EvaluationView => ({ ...listViewOf(evaluation), curves: evaluation.curves });
 
-async function loadRun(services: Services, labId: string, runId: string): Promise<RunRecord> {
-  const run = await findRun(services.database.db, labId, runId);
-  if (run === null) throw notFound('run');
-  return run;
-}
-
 async function loadEvaluation(db: Handle, labId: string, evaluationId: string): Promise<store.EvaluationRecord> {
   const evaluation = await store.findEvaluation(db, labId, evaluationId);
   if (evaluation === null) throw notFound('evaluation');
@@ -48,32 +42,6 @@ function notToBeFrozen({ recomputes, frozenAt, frozenBy }: store.EvaluationRecor
   if (frozenAt !== null)
     return new ProblemError('not-possible-now', `${frozenBy ?? 'Somebody'} froze this evaluation already, at ${isoOf(frozenAt)}.`);
   return new ProblemError('not-possible-now', 'Only an evaluation that came to a result can be frozen.');
-}
-
-/** Name of the channel to evaluate: the one asked for, the registered one, or the only deflection channel with data. */
-async function channelToEvaluate(services: Services, run: RunRecord, asked: string | undefined): Promise<string> {
-  const window = { fromUtcMs: run.startedAt ?? run.createdAt, toUtcMs: run.endedAt ?? services.clock.utcMs() };
-  const filled: string[] = [];
-  for (const channel of await channelsOfRun(services.database.db, run)) {
-    if (channel.role !== 'deflection') continue;
-    if ((await countSamples(services.database, { ...window, labId: run.labId, channelId: channel.id })) > 0) filled.push(channel.name);
-  }
-  const wanted = asked ?? run.start.protocol.evaluation?.channel;
-  if (wanted !== undefined) {
-    if (filled.includes(wanted)) return wanted;
-    const there = filled.length === 0 ? 'no deflection channel has any' : `these have: ${filled.join(', ')}`;
-    throw new ProblemError('cannot-evaluate', `The channel "${wanted}" has no deflection within this run; ${there}.`, [
-      { path: 'channel', message: 'a deflection channel with data' },
-    ]);
-  }
-  const [only, second] = filled;
-  if (only === undefined)
-    throw new ProblemError('cannot-evaluate', 'No deflection lies within this run. Bring the file of the readout in first.');
-  if (second !== undefined)
-    throw new ProblemError('cannot-evaluate', `More than one channel has deflection within this run: ${filled.join(', ')}. Choose one.`, [
-      { path: 'channel', message: `one of ${filled.join(', ')}` },
-    ]);
-  return only;
 }
 
 export const evaluationRoutes = [

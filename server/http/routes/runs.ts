@@ -1,4 +1,5 @@
 import type { Response } from 'express';
+import { readMorning } from '@/shared/contracts/morning';
 import * as contracts from '@/shared/contracts/runs';
 import { stepsCsv } from '@/shared/archive/step-csv';
 import { findProtocol, findRevision } from '@/server/store/protocols';
@@ -9,6 +10,7 @@ import { assertFreshTap, beginRehearsal, beginRun } from '../begin-run';
 import { atTheRig, rigOfBody, rigOfItsRun } from '../desk/at-the-rig';
 import { isDatabaseAway } from '../../store/failures';
 import { isoOf } from '../maker';
+import { morningOf } from '../morning';
 import { decodeCursor, pageFrom } from '../paging';
 import { notFound } from '../problem-error';
 import { mount } from '../route-context';
@@ -119,6 +121,12 @@ const recordRoutes = [
     const page = { afterSeq, limit: query.limit + 1, kind: query.kind };
     const events = await store.readEvents(services.database.db, { labId: run.labId, runId: run.id }, page);
     return pageFrom(events, query.limit, (event) => [event.seq]);
+  }),
+
+  mount(readMorning, async ({ params, membership, services }) => {
+    const run = await load(services, membership.labId, params.runId);
+    if (run.state !== 'held') assertEnded(run);
+    return morningOf(services, run);
   }),
 
   mount(contracts.downloadArchive, async ({ params, membership, services, res }) => {

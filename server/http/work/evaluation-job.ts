@@ -5,12 +5,13 @@ import { findRun } from '@/server/store/runs-read';
 import { archiveInputOf } from '../archive-input';
 import type { Services } from '../services';
 import { softwareVersion } from '../software';
+import { sendMorning } from './morning-job';
 
-const payloadSchema = z.strictObject({ labId: z.string(), evaluationId: z.string() });
+const payloadSchema = z.strictObject({ labId: z.string(), evaluationId: z.string(), morning: z.boolean().optional() });
 
 /** Evaluates a run in a worker thread, from the very archive that a reviewer would download. */
 export async function workEvaluation(services: Services, job: Job): Promise<void> {
-  const payload = payloadSchema.parse(job.payload);
+  const { morning, ...payload } = payloadSchema.parse(job.payload);
   const { db } = services.database;
   const evaluation = await beginEvaluation(db, payload);
   if (evaluation === null) return;
@@ -26,7 +27,8 @@ export async function workEvaluation(services: Services, job: Job): Promise<void
     await endEvaluation(db, payload, { error: why, finishedAt: services.clock.utcMs() });
     if (!isUnusable(error)) services.log.error({ err: error, runId: run.id }, 'an evaluation failed');
   }
+  if (morning === true) await sendMorning(services, run);
 }
 
 /** The data are at fault, not the program: trying again gives the same. */
-const isUnusable = (error: unknown) => error instanceof Error && error.name === 'UnusableArchive';
+const isUnusable = (error: unknown) => error instanceof Error && 'code' in error && error.code === 'unusable-archive';

@@ -137,6 +137,7 @@ export const rows: Readonly<Record<string, Row>> = {
   listEvents: { params: run, allowed: 200 },
   listRunAlarms: { params: run, allowed: 200 },
   downloadArchive: { params: run, allowed: 200 },
+  readMorning: { params: run, allowed: 200 },
   listSchedules: { params: lab, allowed: 200 },
   makeSchedule: {
     params: lab,

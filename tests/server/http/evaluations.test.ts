@@ -2,16 +2,19 @@ import { demoIds } from '@/db/demo/seed';
 import { readZip } from '@/server/evaluation/archive-files';
 import { evaluationViewSchema } from '@/shared/contracts/evaluations';
 import { compareResults } from '@/shared/evaluation/compare-results';
+import { morningSheetSchema } from '@/shared/contracts/morning';
 import { CODATA_2022_G } from '@/shared/physics/constants';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol } from '@/tests/support/lab-server';
+import { outsideWorld } from './outside-world';
 
 jest.setTimeout(120_000);
 
 const database = databaseOfThisFile();
+const outside = outsideWorld();
 let lab: LabServer;
 beforeAll(async () => {
-  lab = await LabServer.start(database());
+  lab = await LabServer.start(database(), { overrides: outside.overrides });
 }, 60_000);
 afterAll(() => lab.stop());
 
@@ -53,6 +56,15 @@ test('a rehearsal of the short protocol is stored like a run, and its evaluation
   const list = await lab.as('viewer', 'GET', `${labPath}/runs/${run.id}/evaluations`).expect(200);
   expect(list.body.items).toHaveLength(1);
   expect(list.body.items[0].curves).toBeUndefined();
+
+  const morning = await lab.as('viewer', 'GET', `${labPath}/runs/${run.id}/morning`).expect(200);
+  const sheet = morningSheetSchema.parse(morning.body);
+  expect(sheet).toMatchObject({ dwells: { planned: 12, done: 12, good: 12 }, lost: [], worst: [], earlier: [] });
+  expect(sheet.ticks.filter(({ ok }) => ok !== true).map(({ code }) => code)).toEqual([]);
+  expect(Math.abs(Date.parse(sheet.plannedEndAt ?? '') - Date.parse(run.endedAt ?? ''))).toBeLessThan(1000);
+  expect(sheet.tonight?.reversal_rad.value).toBe(reversal?.value);
+  expect((sheet.shares?.night ?? 0) + (sheet.shares?.geometry ?? 0)).toBeCloseTo(1, 9);
+  expect(sheet.next.at(-1)?.act).toMatch(/^(go|first)$/);
 
   const at = `${labPath}/evaluations/${done.id}`;
   expect((await lab.as('analyst', 'POST', `${at}/recomputations`).expect(409)).body.detail).toMatch(/not frozen/);
@@ -118,4 +130,21 @@ test('a rehearsal of a draft, and one that is refused', async () => {
     .expect(201);
   await lab.as('operator', 'POST', `${labPath}/rehearsals`).send({ rigId: demoIds.rig, protocolId: lost.body.id }).expect(422);
   expect((await lab.intervene(run.id, 'hold').expect(409)).body.detail).toContain('A rehearsal runs by itself');
+});
+
+test('a run that is over is evaluated by itself, and whoever started it gets its morning sheet', async () => {
+  const runId = await lab.run(quickProtocol({ name: 'A short night' }));
+  await lab.until(runId, 'finished');
+  outside.mails.length = 0;
+  // Two minutes for what is still on its way, then the evaluation, then the message.
+  for (const ms of [121_000, 31_000, 31_000]) await lab.advance(ms);
+  const { body } = await lab.as('viewer', 'GET', `${labPath}/runs/${runId}/evaluations`).expect(200);
+  expect(body.items).toHaveLength(1);
+  expect(body.items[0]).toMatchObject({ createdBy: 'Evenfall', channel: 'deflection' });
+  const sheets = outside.mails.filter(({ subject }) => subject.startsWith('Morning sheet: A short night on '));
+  expect(sheets).toHaveLength(1);
+  expect(sheets[0]?.text).toMatch(/^Finished \d\d:\d\d \w{3}, Europe\/Zurich, as planned\./);
+  expect(sheets[0]?.text).toContain('May I go in?');
+  expect(sheets[0]?.text).toContain('2 of 2 dwells are good');
+  expect(sheets[0]?.text).toMatch(new RegExp(`/runs/${runId}\\n$`));
 });

@@ -1,0 +1,93 @@
+import { Link, type Href } from 'expo-router';
+import { View } from 'react-native';
+import { UncertainText } from '@/components/evaluation/uncertain-text';
+import { Body, Label, Num, Panel, Section } from '@/components/ui';
+import type { MorningNight, MorningSheet } from '@/shared/contracts/morning';
+import { formatDeflectionUncertain } from '@/shared/lib/format-angle';
+import { formatPercent, formatSignificant } from '@/shared/lib/format-number';
+import { formatDay } from '@/shared/lib/format-time';
+import { formatUncertain } from '@/shared/lib/format-uncertain';
+import { beside } from './beside';
+
+const inMrad = ({ value, u }: MorningNight['reversal_rad']) => ({ value: value * 1e3, u: u === null ? null : u * 1e3 });
+
+/** Near minus far of this night beside the nights before it and the control. */
+export function NearFar({ sheet, rehearsal, timeZone }: { sheet: MorningSheet; rehearsal: boolean; timeZone: string }) {
+  const { tonight, earlier } = sheet;
+  if (tonight === null) return null;
+  return (
+    <Panel className="gap-1 !py-3" testID="near-far">
+      <View className="flex-row flex-wrap items-baseline gap-x-3">
+        <UncertainText size={20} {...inMrad(tonight.reversal_rad)} unit="mrad" options={{ exponent: 0 }} testID="reversal" />
+        <Label>near − far, u from the scatter of the dwells</Label>
+      </View>
+      {earlier.length === 0 && !rehearsal ? <Label>The first evaluated night on this rig: nothing to compare it with yet.</Label> : null}
+      {earlier.map((night) => (
+        <EarlierNight key={night.runId} night={night} tonight={tonight} timeZone={timeZone} />
+      ))}
+    </Panel>
+  );
+}
+
+function EarlierNight({ night, tonight, timeZone }: { night: MorningNight; tonight: MorningNight; timeZone: string }) {
+  const off = night.control ? null : beside(tonight.reversal_rad, night.reversal_rad);
+  return (
+    <View className="flex-row flex-wrap items-baseline gap-x-3">
+      <Link href={`/runs/${night.runId}` as Href} className="underline">
+        <Num size={13}>{formatDay(Date.parse(night.startedAt), timeZone)}</Num>
+      </Link>
+      <Num size={13}>{formatDeflectionUncertain(night.reversal_rad)}</Num>
+      <Label>{night.control ? 'control, without sources' : off === null ? '' : `differs by ${formatSignificant(off, 2)} of its u`}</Label>
+    </View>
+  );
+}
+
+const mean = (values: readonly number[]) => values.reduce((sum, value) => sum + value, 0) / values.length;
+
+/** Period, quality and torsion constant of this night beside the mean of those before. */
+export function Pendulum({ sheet: { tonight, earlier } }: { sheet: MorningSheet }) {
+  if (tonight?.period_s == null) return null;
+  const nights = earlier.filter(({ control }) => !control);
+  const before = (pick: (night: MorningNight) => number | null) => {
+    const values = nights.map(pick).filter((value) => value !== null);
+    return values.length === 0 ? null : mean(values);
+  };
+  const qOf = ({ period_s, decayTime_s }: MorningNight) =>
+    period_s === null || decayTime_s === null ? null : (Math.PI * decayTime_s.value) / period_s.value;
+  const q = qOf(tonight);
+  const qU =
+    q === null || tonight.decayTime_s?.u == null
+      ? null
+      : q * Math.hypot(tonight.decayTime_s.u / tonight.decayTime_s.value, (tonight.period_s.u ?? 0) / tonight.period_s.value);
+  return (
+    <Section
+      title="Pendulum"
+      remark={nights.length === 0 ? 'No earlier night to compare with.' : `Beside the mean of ${nights.length} earlier nights.`}
+    >
+      <Panel className="flex-row flex-wrap gap-x-10 gap-y-3" testID="pendulum">
+        <Beside label="damped period" now={{ ...tonight.period_s, unit: 's' }} before={before(({ period_s }) => period_s?.value ?? null)} />
+        {q === null ? null : <Beside label="quality factor Q" now={{ value: q, u: qU, unit: '' }} before={before(qOf)} />}
+        {tonight.kappa_N_m === null ? null : (
+          <Beside
+            label="torsion constant κ"
+            now={{ ...tonight.kappa_N_m, unit: 'N.m' }}
+            before={before(({ kappa_N_m }) => kappa_N_m?.value ?? null)}
+          />
+        )}
+      </Panel>
+    </Section>
+  );
+}
+
+function Beside({ label, now, before }: { label: string; now: { value: number; u: number | null; unit: string }; before: number | null }) {
+  const change = before === null ? null : now.value / before - 1;
+  return (
+    <View>
+      <Body>{formatUncertain(now)}</Body>
+      <Label>
+        {label}
+        {change === null ? '' : `, ${formatPercent(Math.abs(change))} ${change < 0 ? 'below' : 'above'} the mean`}
+      </Label>
+    </View>
+  );
+}

@@ -1,0 +1,66 @@
+import { verifyChain } from '@/shared/archive/chain';
+import type { ChainedEvent } from '@/shared/archive/run-records';
+import type { MorningNight, MorningSheet } from '@/shared/contracts/morning';
+import { morningSheet } from '@/shared/morning/sheet';
+import type { RecordFacts, SampleCover } from '@/shared/morning/ticks';
+import { planTimeline } from '@/shared/protocol/timeline';
+import { listEvaluations } from '../store/evaluations';
+import { nightsBefore, spacingOf } from '../store/nights';
+import { readEvents, readSteps, type RunRecord } from '../store/runs-read';
+import { filledDeflection } from './channel-to-evaluate';
+import type { Services } from './services';
+
+const nightsShown = 5;
+
+/** The morning sheet of a run that is over or held, read off its records. */
+export async function morningOf(services: Services, run: RunRecord): Promise<MorningSheet> {
+  const { db } = services.database;
+  const own = { labId: run.labId, runId: run.id };
+  const startedAtUtcMs = run.startedAt ?? run.createdAt;
+  const events = await readEvents(db, own, { afterSeq: 0 });
+  const newest = (await listEvaluations(db, run.labId, run.id)).find(({ state, result }) => state === 'done' && result !== null);
+  const angleDeg = run.start.rig.motion?.homeDeg ?? 0;
+  return morningSheet({
+    runId: run.id,
+    rig: run.start.rig,
+    startedAtUtcMs,
+    endUtcMs: run.endedAt ?? services.clock.utcMs(),
+    plan: planTimeline(run.start, { utcMs: startedAtUtcMs, angleDeg }),
+    rows: await readSteps(db, own),
+    events,
+    record: recordOf(services, events),
+    cover: await coverOf(services, run, newest?.channel ?? run.start.protocol.evaluation?.channel ?? null),
+    result: newest?.result ?? null,
+    earlier: await earlierNights(services, run),
+  });
+}
+
+function recordOf(services: Services, events: readonly ChainedEvent[]): RecordFacts {
+  const check = verifyChain(events, services.sha256);
+  return { events: events.length, brokenAt: check.valid ? null : check.seq };
+}
+
+/** Of the channel that was or is to be evaluated, or else of the first that has deflection; null where none has. */
+async function coverOf(services: Services, run: RunRecord, wanted: string | null): Promise<SampleCover | null> {
+  const filled = await filledDeflection(services, run);
+  const channel = filled.find(({ name }) => name === wanted) ?? filled[0];
+  if (channel === undefined) return null;
+  const window = { fromUtcMs: run.startedAt ?? run.createdAt, toUtcMs: run.endedAt ?? services.clock.utcMs() };
+  const { longestGapS, usualS } = await spacingOf(services.database, { ...window, labId: run.labId, channelId: channel.id });
+  const everyS = channel.rateHz === null ? usualS : 1 / channel.rateHz;
+  return {
+    ...{ channel: channel.name, samples: channel.samples, longestGapS },
+    expected: everyS === null || everyS === 0 ? null : (window.toUtcMs - window.fromUtcMs) / 1000 / everyS,
+  };
+}
+
+async function earlierNights(services: Services, run: RunRecord): Promise<MorningNight[]> {
+  if (run.rehearsal) return [];
+  const nights = await nightsBefore(services.database, {
+    labId: run.labId,
+    rigId: run.rigId,
+    startedAtUtcMs: run.startedAt ?? run.createdAt,
+  });
+  const control = nights.find((night) => night.control);
+  return [...nights.filter((night) => !night.control).slice(0, nightsShown), ...(control === undefined ? [] : [control])];
+}

@@ -1,0 +1,63 @@
+import type { MorningNight } from '@/shared/contracts/morning';
+import type { EvaluationResult } from '@/shared/evaluation/result';
+import type { Connection } from './database';
+import type { SampleWindow } from './runs-read';
+
+/** What the morning sheet of a run is compared with, and how whole its deflection is. */
+
+/** So many runs before this one are looked through for evaluated nights and for a control. */
+const runsSearched = 40;
+
+type NightRow = Pick<EvaluationResult, 'period_s'> & {
+  id: string;
+  startedAt: string;
+  control: boolean;
+  reversal: { value: number; u: number | null };
+  decayTime: EvaluationResult['decayTime_s'];
+  kappa: EvaluationResult['kappa_N_m'];
+};
+
+/** Runs on the rig before an instant as their newest evaluation sees them, the newest first; no rehearsals. */
+export async function nightsBefore(
+  connection: Connection,
+  run: { labId: string; rigId: string; startedAtUtcMs: number },
+): Promise<MorningNight[]> {
+  const { rows } = await connection.pool.query<NightRow>(
+    `with earlier as (
+       select lab_id, id, started_at, start #>> '{rig,sources,shape}' = 'none' as control from runs
+       where lab_id = $1 and rig_id = $2 and not rehearsal and started_at < $3 order by started_at desc limit ${String(runsSearched)})
+     select earlier.id, to_char(started_at at time zone 'UTC', 'YYYY-MM-DD"T"HH24:MI:SS.MS"Z"') as "startedAt", control,
+       newest.result -> 'reversal_rad' as reversal, newest.result -> 'period_s' as period_s,
+       newest.result -> 'decayTime_s' as "decayTime", newest.result -> 'kappa_N_m' as kappa
+     from earlier, lateral (
+       select result from evaluations where lab_id = earlier.lab_id and run_id = earlier.id and state = 'done' and result is not null
+       order by created_at desc limit 1) as newest
+     where json_typeof(newest.result -> 'reversal_rad') = 'object' order by started_at desc`,
+    [run.labId, run.rigId, new Date(run.startedAtUtcMs)],
+  );
+  return rows.map(({ id, startedAt, control, reversal, period_s, decayTime, kappa }) => ({
+    ...{ runId: id, startedAt, control, period_s, decayTime_s: decayTime, kappa_N_m: kappa },
+    reversal_rad: { value: reversal.value, u: reversal.u },
+  }));
+}
+
+export interface Spacing {
+  /** The longest time without a sample within the window, its ends counted, s. */
+  longestGapS: number;
+  /** Half of the samples follow the one before at least as soon, s; null with fewer than two. */
+  usualS: number | null;
+}
+
+/** How the samples of a channel lie within a window. */
+export async function spacingOf(connection: Connection, window: SampleWindow): Promise<Spacing> {
+  const { rows } = await connection.pool.query<{ gap: number | null; usual: number | null }>(
+    `with edged as (
+       select at, false as edge from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4
+       union all select $3::timestamptz, true union all select $4::timestamptz, true),
+     gaps as (select edge or lag(edge) over ordered as edge, at - lag(at) over ordered as gap from edged window ordered as (order by at))
+     select extract(epoch from max(gap))::double precision as gap,
+       extract(epoch from percentile_disc(0.5) within group (order by gap) filter (where not edge))::double precision as usual from gaps`,
+    [window.labId, window.channelId, new Date(window.fromUtcMs), new Date(window.toUtcMs)],
+  );
+  return { longestGapS: rows[0]?.gap ?? (window.toUtcMs - window.fromUtcMs) / 1000, usualS: rows[0]?.usual ?? null };
+}
