@@ -37,17 +37,31 @@ export function ResultScreen({ view }: { view: RunView }) {
   const result = evaluations.done?.result ?? null;
   const morning = useMorning(view.id, evaluations.done?.id ?? null);
   const sheet = morning.data?.data ?? null;
+  const wide = useWide();
+  const atOnce = (
+    <>
+      {view.rehearsal ? null : <RigNow rigId={view.rigId} timeZone={timeZone} />}
+      {sheet === null ? <SheetState morning={morning} /> : <NightFigures sheet={sheet} />}
+    </>
+  );
+  const next = sheet === null ? null : <WhatNext next={sheet.next} />;
   return (
     <Screen
       title={titleOf(view, timeZone)}
       back={{ href: '/runs' as Href, label: 'Runs' }}
       trailing={<Chip tone={view.rehearsal ? 'lamp' : 'dim'}>{view.rehearsal ? 'rehearsal' : view.rigName}</Chip>}
+      asideOnlyWide
+      aside={
+        <>
+          {atOnce}
+          {next}
+        </>
+      }
       testID="result-screen"
     >
       <Headline view={view} plan={sheet === null ? '' : planWords(sheet, view.endedAt)} timeZone={timeZone} />
       <LastStages view={view} timeZone={timeZone} />
-      {view.rehearsal ? null : <RigNow rigId={view.rigId} timeZone={timeZone} />}
-      {sheet === null ? <SheetState morning={morning} /> : <NightFigures sheet={sheet} />}
+      {wide ? null : atOnce}
       <WholeNight view={view} rows={rows} timeZone={timeZone} />
       {sheet === null ? null : <NearFar sheet={sheet} rehearsal={view.rehearsal} timeZone={timeZone} />}
       {result === null ? (
@@ -66,7 +80,7 @@ export function ResultScreen({ view }: { view: RunView }) {
           {formatPercent(Math.max(0, sheet.shares.geometry))}.
         </Label>
       )}
-      {sheet === null ? null : <WhatNext next={sheet.next} />}
+      {wide ? null : next}
       {sheet === null ? null : <WorstMoments worst={sheet.worst} runId={view.id} timeZone={timeZone} />}
       {sheet === null ? null : <Pendulum sheet={sheet} />}
       <PairsPanel runId={view.id} rows={rows} timeZone={timeZone} />

@@ -1,7 +1,7 @@
 import type { RigView } from '../contracts/rigs';
 import { formatDegrees } from '../lib/format-angle';
 import { formatClock, formatClockWithZone } from '../lib/format-time';
-import { stationAt } from '../protocol/stations';
+import { slipToleranceDeg } from '../rig/position-proof';
 
 /** Whether somebody may reach into the rig now, and what that is read off. */
 export interface MayGoIn {
@@ -33,10 +33,13 @@ function judged({ live, arm, locks, activeRun }: RigNow, timeZone: string): Pick
   return { answer: 'yes', words: 'Nothing moves before somebody arms it with the key. Set your lock before you reach in.' };
 }
 
+/** The station that the table stands at, as well as its microsteps and the home edge can tell. */
+const stationNear = (rig: RigView['document'], angleDeg: number): string | undefined =>
+  Object.keys(rig.stations).find((name) => Math.abs((rig.stations[name]?.value ?? Number.NaN) - angleDeg) <= slipToleranceDeg(rig));
+
 function factsOf({ live, arm, document }: RigNow, timeZone: string): string[] {
   const { angleDeg, positionKnown, driversOn, interlockClosed, lastReplyAt } = live;
-  const station = angleDeg === null || !positionKnown ? '' : stationAt(document, angleDeg);
-  const sources = angleDeg === null || !positionKnown ? 'not known' : station === '' ? `at ${formatDegrees(angleDeg)}` : `at ${station}`;
+  const sources = angleDeg === null || !positionKnown ? 'not known' : `at ${stationNear(document, angleDeg) ?? formatDegrees(angleDeg)}`;
   const told = (value: boolean | null, yes: string, no: string) => (value === null ? 'not known' : value ? yes : no);
   return [
     `sources ${sources}`,

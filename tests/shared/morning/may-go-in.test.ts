@@ -19,7 +19,8 @@ test('yes at a rig that is heard, at rest, without a run and not armed', () => {
     words: 'Nothing moves before somebody arms it with the key. Set your lock before you reach in.',
     facts: ['sources at inline', 'motor off', 'door closed', 'not armed', 'heard 06:53'],
   });
-  expect(asked({ live: { ...live, angleDeg: demoRigWide.stations['near']?.value ?? NaN } }).facts[0]).toBe('sources at near');
+  expect(asked({ live: { ...live, angleDeg: 0.01 + (demoRigWide.stations['near']?.value ?? NaN) } }).facts[0]).toBe('sources at near');
+  expect(asked({ live: { ...live, angleDeg: 12.5 } }).facts[0]).toBe('sources at 12.50°');
 });
 
 test('no while it moves, while a run is on, held or not, and while it is armed', () => {
