@@ -19,7 +19,8 @@ export function stripSummary({ steps, timeZone, nowUtcMs, hasMeasured }: Summary
   const first = steps[0];
   const last = steps.at(-1);
   if (!first || !last) return 'No steps yet.';
-  const stands = standsOf(steps).filter((stand) => stand.measured);
+  // The ring-down after a kick is recorded too, but is no dwell of the series.
+  const stands = standsOf(steps.filter(({ kind }) => kind !== 'ring-down')).filter((stand) => stand.measured);
   const count = (lane: string) => stands.filter((stand) => stand.lane === lane).length;
   const others = stands.length - count('near') - count('far');
   const sides = [

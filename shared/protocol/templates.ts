@@ -1,8 +1,7 @@
 import type { RigDocument } from '../rig/document';
 import type { ProtocolDocument, Step } from './document';
-import { swingMove, UnplayableStep } from './durations';
-import { pathObstacles } from './motion-path';
-import { partsIfPossible, shapedMoveCount } from './step-parts';
+import { shapedMoveCount } from './step-parts';
+import { calm, kick, pair, restOfBeatS, restOfHourS, reversal, scanAngles, swing, usualCalmS } from './template-steps';
 
 export interface Template {
   id: string;
@@ -14,13 +13,6 @@ export interface Template {
   /** The rig it is meant for when it is planned or rehearsed from the command line: the empty control takes the spheres off. */
   rigFor(rig: RigDocument): RigDocument;
 }
-
-const swing = (to: string | number): Step => ({ kind: 'swing', to: typeof to === 'string' ? to : { angle_deg: to } });
-
-/** From swing to swing two whole periods, so that no swing adds to the ringing of the one before. */
-const beat: Step = { kind: 'dwell', beat_periods: 2 };
-const reversal = (to: string | number): Step[] => [swing(to), beat];
-const pair: Step[] = [...reversal('far'), ...reversal('near')];
 
 function document(name: string, parts: Pick<ProtocolDocument, 'notes' | 'steps'> & Partial<ProtocolDocument>): ProtocolDocument {
   return {
@@ -42,27 +34,27 @@ export function withoutSources(rig: RigDocument): RigDocument {
   return { ...rig, sources: { ...rig.sources, shape: 'none' } };
 }
 
-/** What a night is asked for before it is worth running: drift below a tenth of a milliradian an hour over the time that a first look takes. */
-const calm = (windowS: number): Step => ({
-  kind: 'settle',
-  calmWhen: { drift_urad_per_h: 100, window_s: windowS },
-  atMost_s: 5400,
-  otherwise: 'continue',
-});
-const usualCalmS = 600;
-
 const overnight = (rig: RigDocument, name: string, notes: string): ProtocolDocument =>
   document(name, {
     notes,
     ...atClear(rig),
-    steps: [{ kind: 'home' }, swing('near'), ...pair, { kind: 'proof' }, calm(usualCalmS), { kind: 'repeat', times: 16, steps: pair }],
+    steps: [
+      { kind: 'home' },
+      swing('near'),
+      ...pair,
+      { kind: 'proof' },
+      calm(usualCalmS),
+      ...kick(rig, 'near', 4),
+      { kind: 'repeat', times: 16, steps: pair },
+      ...kick(rig, 'near', 4),
+    ],
   });
 
 const nearFar: Template = {
   id: 'near-far',
   name: 'Overnight reversals',
   summary:
-    'The standard night: a first pair that proves it, a wait until the drift is small, 16 pairs of a far and a near dwell at a beat of two periods, then the sources turn clear.',
+    'The standard night: a first pair that proves it, a wait until the drift is small, 16 pairs of a far and a near dwell at a beat of two periods between two kicks that tell period and decay, then the sources turn clear.',
   make: (rig) => overnight(rig, 'Overnight reversals', ''),
   rigFor: asItIs,
 };
@@ -70,13 +62,15 @@ const nearFar: Template = {
 const proof: Template = {
   id: 'proof',
   name: 'Proof hour',
-  summary: 'Three reversals after any change to the rig and before a campaign: sign, size and period of the signal show whether it works.',
-  make: () =>
+  summary:
+    'A kick and three reversals after any change to the rig and before a campaign: sign, size and period of the signal show whether it works.',
+  make: (rig) =>
     document('Proof hour', {
       notes: '',
       steps: [
         { kind: 'home' },
         swing('near'),
+        ...kick(rig, 'near', 3),
         ...reversal('far'),
         ...reversal('near'),
         ...reversal('far'),
@@ -93,32 +87,28 @@ const scan: Template = {
     'Dwells at a row of angles, up and down again: where the torque is zero and where it is greatest. For a new rig, or when the table was moved.',
   make: (rig) => {
     const up = scanAngles(rig);
+    const [first, ...others] = up as [number, ...number[]];
+    const again: Step = { kind: 'dwell', periods: 2 };
     // Every angle once on the way up and once on the way down: at the turning point a second dwell follows without a motion.
-    const steps: Step[] = [...up.flatMap(reversal), { kind: 'dwell', periods: 2 }, ...up.slice(0, -1).reverse().flatMap(reversal)];
+    const steps = [
+      swing(first),
+      ...kick(rig, first, 4),
+      again,
+      ...others.flatMap(reversal),
+      again,
+      ...up.slice(0, -1).reverse().flatMap(reversal),
+    ];
     return document('Torque scan', { notes: '', steps: [{ kind: 'home' }, ...steps] });
   },
   rigFor: asItIs,
 };
 
-const wideScan = [-70, -45, -30, -20, -10, 0, 10, 20, 30, 45, 70];
-const closeScan = [33, 40, 50, 65, 90, 115, 130, 140, 147];
-
-/** Angles that can be reached from the home position and from each other, ascending, deg. */
-function scanAngles(rig: RigDocument): number[] {
-  const motion = rig.motion;
-  if (motion === undefined) return wideScan;
-  const reachable = (angles: number[]) => angles.filter((angleDeg) => pathObstacles(motion, motion.homeDeg, angleDeg).length === 0);
-  const wide = reachable(wideScan);
-  const close = reachable(closeScan);
-  return close.length > wide.length ? close : wide;
-}
-
 const still: Template = {
   id: 'still',
   name: 'Still night',
   summary:
-    'An hour to settle and 32 dwells of two periods without any motion: the noise and the drift of the rig in this room, before the first measurement of G.',
-  make: () =>
+    'An hour to settle and 32 dwells of two periods without any motion, a kick at the end: the noise and the drift of the rig in this room, before the first measurement of G.',
+  make: (rig) =>
     document('Still night', {
       notes: '',
       steps: [
@@ -126,6 +116,7 @@ const still: Template = {
         swing('near'),
         { kind: 'settle', for_s: 3600 },
         { kind: 'repeat', times: 32, steps: [{ kind: 'dwell', periods: 2 }] },
+        ...kick(rig, 'near', 4),
       ],
     }),
   rigFor: asItIs,
@@ -149,35 +140,27 @@ const fourStation: Template = {
         ...pair,
         { kind: 'proof' },
         calm(restOfHourS(rig)),
-        { kind: 'repeat', times: 23, steps: block },
+        ...kick(rig, 'near', 4),
+        { kind: 'repeat', times: 12, steps: block },
+        ...kick(rig, 'near', 4),
+        { kind: 'repeat', times: 11, steps: block },
+        ...kick(rig, 'near', 4),
       ],
     });
   },
   rigFor: asItIs,
 };
 
-/** Proof pair and wait take an hour together, but the wait no less than usual, s. */
-const restOfHourS = (rig: RigDocument): number => Math.max(usualCalmS, 3600 - 4 * Math.round(rig.measured?.period_s?.value ?? 420));
-
-/** What a turn from station to station leaves of a beat of two periods, s; a turn that cannot be planned counts as none. */
-function restOfBeatS(rig: RigDocument, from: string, to: string): number {
-  const beatS = 2 * (rig.measured?.period_s?.value ?? 420);
-  try {
-    const { durationS } = swingMove({ to }, rig, rig.stations[from]?.value ?? 0);
-    return Math.max(1, Math.round((beatS - durationS) * 1000) / 1000);
-  } catch (error) {
-    if (error instanceof UnplayableStep) return beatS;
-    throw error;
-  }
-}
-
 const nearFarShort: Template = {
   id: 'near-far-short',
   name: 'Short reversals',
   summary:
-    'Six pairs of a far and a near dwell at a beat of two periods: a first value of G in under three hours, for demonstrations and rehearsals.',
-  make: () =>
-    document('Short reversals', { notes: '', steps: [{ kind: 'home' }, swing('near'), { kind: 'repeat', times: 6, steps: pair }] }),
+    'A kick, then six pairs of a far and a near dwell at a beat of two periods: a first value of G in about three hours, for demonstrations and rehearsals.',
+  make: (rig) =>
+    document('Short reversals', {
+      notes: '',
+      steps: [{ kind: 'home' }, swing('near'), ...kick(rig, 'near', 3), { kind: 'repeat', times: 6, steps: pair }],
+    }),
   rigFor: asItIs,
 };
 
@@ -197,14 +180,15 @@ const emptyControl: Template = {
 const afternoon: Template = {
   id: 'afternoon',
   name: 'Teaching afternoon',
-  summary: 'One slot with people in the room: hands clear and predictions handed in, then two pairs; time remains to evaluate.',
-  make: () =>
+  summary: 'One slot with people in the room: hands clear and predictions handed in, then a kick and two pairs; time remains to evaluate.',
+  make: (rig) =>
     document('Teaching afternoon', {
       notes: '',
       steps: [
         { kind: 'prompt', text: 'Hands clear of the rig, predictions handed in', atMost_s: 1800, otherwise: 'hold' },
         { kind: 'home' },
         swing('near'),
+        ...kick(rig, 'near', 3),
         ...pair,
         ...pair,
       ],
@@ -259,15 +243,6 @@ const timeOfSwing: Template = {
   },
   rigFor: asItIs,
 };
-
-/** A kick at a station: 2 mrad, or less where the sources of the rig cannot give that; none where its pendulum is not measured. */
-function kick(rig: RigDocument, station: string, periods: number): Step[] {
-  const step = (amplitude: number): Step => ({ kind: 'kick', amplitude_urad: amplitude, periods });
-  const angleDeg = rig.stations[station]?.value;
-  if (angleDeg === undefined || rig.motion === undefined) return [step(2000)];
-  const amplitude = [2000, 1000, 500, 200, 100, 50, 20, 10].find((each) => partsIfPossible(step(each), rig, angleDeg) !== null);
-  return amplitude === undefined ? [] : [step(amplitude)];
-}
 
 /** The built-in templates, in the order in which they are offered. */
 export const templates: readonly Template[] = [

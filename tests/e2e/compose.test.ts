@@ -38,50 +38,50 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.at('template-near-far-short').waitFor();
     await hand.shoots('new-protocol');
     await hand.taps('template-near-far-short');
-    // A beat is two periods of 420 s; the protocol is six pairs of beats after home and a first swing: 12 · 840 s and a little.
-    expect(await hand.reads('total-time', '2 h 48 min')).toBe('2 h 48 min');
+    // A beat is two periods of 420 s; the protocol is six pairs of beats after home, a first swing and a kick with three periods: 12 · 840 s, 1477 s and a little.
+    expect(await hand.reads('total-time', '3 h 13 min')).toBe('3 h 13 min');
     await hand.hears('swing-strip', /6 near dwells and 6 far dwells/);
   });
 
   chapter('adds, nests, moves, duplicates and deletes steps, and takes it all back', async () => {
-    await hand.taps('step-3');
+    await hand.taps('step-4');
     await hand.taps('add-step');
     await hand.shoots('add-step');
     await hand.tapsOn('After', 'radio');
     await hand.taps('add-settle');
-    await hand.at('step-4').waitFor();
-    const added = await hand.reads('total-time', /^2 h 5\d min|^3 h/);
+    await hand.at('step-5').waitFor();
+    const added = await hand.reads('total-time', /^3 h 2\d min/);
     await hand.taps('nest');
-    await hand.at('step-4.1').waitFor();
-    expect(await hand.reads('step-4')).toContain('Repeat');
+    await hand.at('step-5.1').waitFor();
+    expect(await hand.reads('step-5')).toContain('Repeat');
     const nested = await hand.readsOther('total-time', added);
     await hand.taps('duplicate');
-    await hand.at('step-5').waitFor();
+    await hand.at('step-6').waitFor();
     const doubled = await hand.readsOther('total-time', nested);
     await hand.taps('delete');
-    await hand.at('step-5').waitFor({ state: 'detached' });
+    await hand.at('step-6').waitFor({ state: 'detached' });
     await hand.taps('undo');
-    await hand.at('step-5').waitFor();
+    await hand.at('step-6').waitFor();
     await hand.reads('total-time', doubled);
     await hand.taps('redo');
-    await hand.at('step-5').waitFor({ state: 'detached' });
+    await hand.at('step-6').waitFor({ state: 'detached' });
     // Up from behind a repeat is into its end.
     await hand.taps('move-up');
-    await hand.reads('step-3.5.1', 'Settle');
+    await hand.reads('step-4.5.1', 'Settle');
     await hand.readsOther('total-time', added);
     for (let times = 0; times < 5 && (await hand.isEnabled('undo')); times += 1) await hand.taps('undo');
-    expect(await hand.reads('total-time', '2 h 48 min')).toBe('2 h 48 min');
-    await hand.at('step-4').waitFor({ state: 'detached' });
+    expect(await hand.reads('total-time', '3 h 13 min')).toBe('3 h 13 min');
+    await hand.at('step-5').waitFor({ state: 'detached' });
   });
 
   chapter('says that a beat pumps the pendulum, and says nothing more once it does not', async () => {
-    await openDetails(hand, '3.2');
+    await openDetails(hand, '4.2');
     await hand.types('dwell-periods', '1.5');
     await closeDetails(hand);
     await hand.at('finding-cycle-pumps').waitFor();
     expect(await hand.reads('finding-cycle-pumps')).toMatch(/1\.50 periods, which is near an odd number of half periods.*beat_periods 2/);
     await hand.hears('swing-strip', /6 near dwells and 6 far dwells/);
-    await hand.readsOther('total-time', '2 h 48 min');
+    await hand.readsOther('total-time', '3 h 13 min');
     await hand.at('finding-cycle-pumps').scrollIntoViewIfNeeded();
     await hand.shoots('advice');
     await hand.taps('undo');
@@ -89,12 +89,12 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
   });
 
   chapter('refuses to plan what the rig does not have, at the step, and takes another number at once', async () => {
-    await openDetails(hand, '3');
+    await openDetails(hand, '4');
     await hand.types('repeat-times', 'two');
     await hand.sees('a number, for example 2.5');
     await hand.types('repeat-times', '2');
     await closeDetails(hand);
-    expect(await hand.reads('total-time', '56 min')).toMatch(/56 min/);
+    expect(await hand.reads('total-time', '1 h 21 min')).toMatch(/1 h 21 min/);
     await hand.shoots('editor');
   });
 
@@ -104,7 +104,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.shoots('issue');
     await hand.taps('issue-confirm');
     await hand.sees('Revision 1 is issued.');
-    await openDetails(hand, '3');
+    await openDetails(hand, '4');
     await hand.types('repeat-times', '3');
     await closeDetails(hand);
     await hand.taps('issue');
@@ -135,7 +135,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     const ajv = addFormats(new Ajv({ strict: false }));
     expect(ajv.validate(published, JSON.parse(text))).toBe(true);
     const document = protocolDocumentSchema.parse(JSON.parse(text));
-    expect(document.steps[2]).toMatchObject({ kind: 'repeat', times: 3 });
+    expect(document.steps[3]).toMatchObject({ kind: 'repeat', times: 3 });
 
     await hand.goes('/protocols/new', 'new-protocol-screen');
     await hand.taps('from-file');
@@ -166,7 +166,7 @@ test('by keyboard alone a protocol is composed and issued', async () => {
   await hand.tabsTo('template-near-far-short');
   await press('Enter');
   await hand.at('editor').waitFor();
-  await hand.reads('total-time', '2 h 48 min');
+  await hand.reads('total-time', '3 h 13 min');
 
   await hand.tabsTo('step-list');
   await press('End', 'Enter');
@@ -174,7 +174,7 @@ test('by keyboard alone a protocol is composed and issued', async () => {
   await hand.tabsTo('dwell-periods');
   await press('Control+a');
   await page.keyboard.type('3');
-  await hand.reads('total-time', '3 h 30 min');
+  await hand.reads('total-time', '3 h 55 min');
 
   await hand.tabsTo('add-step', 'Shift+Tab');
   await press('Enter');
@@ -184,17 +184,17 @@ test('by keyboard alone a protocol is composed and issued', async () => {
   await hand.at('add-step-sheet').waitFor({ state: 'detached' });
   await hand.tabsTo('step-list', 'Shift+Tab');
   await press('Alt+ArrowUp');
-  await hand.reads('step-3.4', 'Mark');
+  await hand.reads('step-4.4', 'Mark');
   await press('Alt+ArrowLeft');
-  await hand.reads('step-4', 'Mark');
+  await hand.reads('step-5', 'Mark');
   await press('Alt+ArrowRight');
-  await hand.at('step-4.1').waitFor();
+  await hand.at('step-5.1').waitFor();
   await press('Control+z', 'Delete');
-  await hand.at('step-4').waitFor({ state: 'detached' });
+  await hand.at('step-5').waitFor({ state: 'detached' });
   await press('Control+z');
-  await hand.reads('step-4', 'Mark');
+  await hand.reads('step-5', 'Mark');
   await press('Delete');
-  await hand.at('step-4').waitFor({ state: 'detached' });
+  await hand.at('step-5').waitFor({ state: 'detached' });
 
   await hand.tabsTo('issue');
   await press('Enter');

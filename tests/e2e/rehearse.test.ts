@@ -23,7 +23,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
   chapter('the button runs the draft in fast time and leads to the finished night', async () => {
     await hand.goes(`/protocols/${demoIds.shortProtocol}`, 'editor');
     await hand.taps('rehearse');
-    await hand.sees(/all 2 h 48 min of it in seconds/);
+    await hand.sees(/all 3 h 13 min of it in seconds/);
     await hand.page.getByLabel('Seed').fill('none');
     await hand.sees(/a whole number from 1 to/);
     expect(await hand.isEnabled('rehearse-confirm')).toBe(false);
@@ -31,7 +31,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.shoots('rehearse');
     await hand.taps('rehearse-confirm');
     await hand.at('result-screen').waitFor({ timeout: 60_000 });
-    expect(await hand.reads('headline', 'Finished')).toMatch(/after 2 h 48 min/);
+    expect(await hand.reads('headline', 'Finished')).toMatch(/after 3 h 13 min/);
     await hand.reads('good-dwells', /^12 of 12/);
     await hand.hears('night-strip', /12 of 12 dwells done\. The solid line is the measured deflection/);
   });

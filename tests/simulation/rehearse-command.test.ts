@@ -58,7 +58,7 @@ describe('the rehearsal of a short night', () => {
       simulated: { trueG: 6.6743e-11, seed: 1, rateHz: 10 },
     });
     const datapackage = JSON.parse(readFileSync(at('night/datapackage.json'), 'utf8')) as { created: string };
-    expect(datapackage.created).toMatch(/^2000-01-01T02:48:0/);
+    expect(datapackage.created).toMatch(/^2000-01-01T03:12:4/);
     expect(archive().chain).toMatchObject({ valid: true });
     expect(readFileSync(at('night/events.jsonl'), 'utf8').trim().split('\n').at(-1)).toContain('"kind":"archived"');
   });

@@ -23,6 +23,13 @@ test('an empty strip says so', () => {
   expect(stripSummary({ steps: [], timeZone, hasMeasured: false })).toBe('No steps yet.');
 });
 
+test('what rings down after a kick is no dwell of the series', () => {
+  const kicked = steps.map((step, i) => (i === steps.findIndex(({ kind }) => kind === 'dwell') ? { ...step, kind: 'ring-down' } : step));
+  const counted = (own: typeof steps) =>
+    Number(/of (\d+) dwells/.exec(stripSummary({ steps: own, timeZone, nowUtcMs, hasMeasured: false }))?.[1]);
+  expect(counted(kicked)).toBe(counted(steps) - 1);
+});
+
 test('offers a picture with its summary and a table with every step', () => {
   render(<SwingStrip steps={steps} timeZone={timeZone} title="North bench" nowUtcMs={nowUtcMs} />);
   expect(screen.getByRole('img').getAttribute('aria-label')).toContain('North bench: 16 near dwells');

@@ -6,7 +6,7 @@ import { Lab } from './lab';
 
 const base = `/labs/${demoIds.lab}`;
 
-/** The short template with so many pairs of beats: home, swing to near, pairs of 2 · 840 s. */
+/** The short template with so many pairs of beats and without its kick: home, swing to near, pairs of 2 · 840 s. */
 export function shortNight(name: string, pairs: number): ProtocolDocument {
   const template = templates.find(({ id }) => id === 'near-far-short');
   if (template === undefined) throw new Error('the short template is gone');
@@ -14,7 +14,9 @@ export function shortNight(name: string, pairs: number): ProtocolDocument {
   return {
     ...document,
     name,
-    steps: document.steps.map((step) => (step.kind === 'repeat' ? ({ ...step, times: pairs } as RepeatStep) : step)),
+    steps: document.steps
+      .filter(({ kind }) => kind !== 'kick')
+      .map((step) => (step.kind === 'repeat' ? ({ ...step, times: pairs } as RepeatStep) : step)),
   };
 }
 

@@ -58,12 +58,16 @@ test('a template: all the keys of the format', () => {
   // 0.38 % of the orbit and 0.11 % of the arm (design reference F4) beside 0.04 % of noise.
   expect(result?.['relativeU']).toBeCloseTo(0.00399, 4);
   expect(result?.['u_by_source']).toMatchObject({ 'sources.orbit': expect.closeTo(0.0037719, 5) as number });
-  expect(result?.['bestDwell_s']).toBeCloseTo(840 - 9.727, 2);
-  expect(result?.['peakExcursion_rad']).toBeCloseTo(0.0027, 4);
+  // With a kick to tell period and decay one period from swing to swing is best (design reference J2).
+  expect(result?.['bestDwell_s']).toBeCloseTo(420 - 9.727, 2);
+  // After the kick it swings by 2 mrad about 1.187 mrad, and half a period later still by K = 0.82 of it (design reference A4, A8).
+  expect(result?.['peakExcursion_rad']).toBeGreaterThan(0.001187 + 0.82 * 0.002);
+  expect(result?.['peakExcursion_rad']).toBeLessThan(0.001187 + 0.002);
   expect((result?.['alternatives'] as unknown[]).length).toBeGreaterThanOrEqual(2);
-  // Twelve beats of 840 s, a move of 20.18 deg (20.18 / 6 + 3 s), and a homing from the home position that takes a second or two.
-  expect(result?.['duration_s']).toBeGreaterThan(10_086.36);
-  expect(result?.['duration_s']).toBeLessThan(10_089);
+  // Twelve beats of 840 s, a move of 20.18 deg (20.18 / 6 + 3 s), a homing from the home position that takes a second or two, and a kick: half a
+  // period, the rest of two moves of some seconds, and three periods of ring-down.
+  expect(result?.['duration_s']).toBeGreaterThan(10_086.36 + 3.5 * 420);
+  expect(result?.['duration_s']).toBeLessThan(10_089 + 3.5 * 420 + 10);
   // 2.3738257e-3 rad at the greatest torque of rig W (design reference A4), which is flat there; the spot moves 4 × 5 m times as far.
   expect(((result?.['signal_rad'] as number) / 0.002373825686861 - 1) ** 2).toBeLessThan(1e-12);
   expect(((result?.['signal_m'] as number) / (20 * 0.002373825686861) - 0.5) ** 2).toBeLessThan(1e-8);

@@ -52,7 +52,8 @@ test('a rehearsal of the short protocol is stored like a run, and its evaluation
   expect(reversal?.count).toBe(11);
   expect(Math.abs((G?.value ?? 0) - CODATA_2022_G.value)).toBeLessThan(2 * (G?.u ?? 0));
   expect((G?.u ?? 1) / (G?.value ?? 1)).toBeLessThan(0.01);
-  expect(done.curves?.length).toBe(12);
+  // Twelve dwells and the ring-down after the kick.
+  expect(done.curves?.length).toBe(13);
   const list = await lab.as('viewer', 'GET', `${labPath}/runs/${run.id}/evaluations`).expect(200);
   expect(list.body.items).toHaveLength(1);
   expect(list.body.items[0].curves).toBeUndefined();

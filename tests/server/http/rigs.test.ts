@@ -130,9 +130,9 @@ describe('start checks', () => {
       'armed',
       'cautions',
     ]);
-    // home, then 6 x (far, near) at a beat of 2 periods of 420 s and the settling swing: 12 x 840 s and little more
-    expect(report.durationS).toBeGreaterThan(12 * 840);
-    expect(report.durationS).toBeLessThan(12 * 840 + 60);
+    // Home, a swing, a kick of half a period with three periods of ring-down, then 6 × (far, near) at a beat of 2 periods of 420 s, and little more.
+    expect(report.durationS).toBeGreaterThan(3.5 * 420 + 12 * 840);
+    expect(report.durationS).toBeLessThan(3.5 * 420 + 12 * 840 + 60);
     expect(Date.parse(report.finishAt) - lab.clock.utcMs()).toBeCloseTo(1000 * report.durationS, -2);
     expect(report.firstMove).toContain('home');
   });

@@ -26,11 +26,25 @@ test('all but those for a rig that turns freely can be carried out on the close 
   );
 });
 
+test.each([
+  ['proof', 1, 3],
+  ['scan', 1, 4],
+  ['still', 1, 4],
+  ['near-far', 2, 4],
+  ['shaped', 2, 4],
+  ['four-station', 3, 4],
+  ['afternoon', 1, 3],
+])('%s holds as many ring-downs after kicks as practice wants: %d of %d periods', (id, count, periods) => {
+  const { items } = planTimeline({ protocol: make(id), rig: demoRigWide, timeZone: 'UTC' }, { utcMs: 0, angleDeg: 0 });
+  const lengths = items.filter(({ kind }) => kind === 'ring-down').map(({ startUtcMs, endUtcMs }) => (endUtcMs - startUtcMs) / 420_000);
+  expect(lengths.map((each) => Number(each.toFixed(6)))).toEqual(Array.from({ length: count }, () => periods));
+});
+
 test('ids are unique', () => {
   expect(new Set(templates.map(({ id }) => id)).size).toBe(templates.length);
 });
 
-test('near-far-short: home, near, six pairs of far and near at a beat of two periods', () => {
+test('near-far-short: home, near, a kick of 2 mrad, six pairs of far and near at a beat of two periods', () => {
   const reversal = (to: string): Step[] => [
     { kind: 'swing', to },
     { kind: 'dwell', beat_periods: 2 },
@@ -38,15 +52,19 @@ test('near-far-short: home, near, six pairs of far and near at a beat of two per
   expect(make('near-far-short').steps).toEqual([
     { kind: 'home' },
     { kind: 'swing', to: 'near' },
+    { kind: 'kick', amplitude_urad: 2000, periods: 3 },
     { kind: 'repeat', times: 6, steps: [...reversal('far'), ...reversal('near')] },
   ]);
   expect(make('near-far-short').evaluation).toEqual({ method: 'equilibrium', drift: 'aba', channel: 'deflection' });
 });
 
-test('near-far: a first pair and 16 more, then clear', () => {
+test('near-far: a first pair and 16 more between two kicks, then clear, in 9 h 11', () => {
   const document = make('near-far');
   const timeline = planTimeline({ protocol: document, rig: demoRigWide, timeZone: 'UTC' }, { utcMs: 0, angleDeg: 0 });
   expect(timeline.dwells).toBe(34);
+  expect(timeline.items.filter(({ kind }) => kind === 'ring-down').map(({ path }) => path)).toEqual(['9.kick', '11.kick']);
+  // Practice counts a minute for homing and 22 s for each move.
+  expect(Math.abs(timeline.durationS - (9 * 3600 + 11 * 60))).toBeLessThan(180);
   expect(document.atEnd).toEqual({ station: 'clear', drivers: 'keep' });
   expect(timeline.items.at(-1)?.station).toBe('clear');
 });
