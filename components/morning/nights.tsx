@@ -42,10 +42,15 @@ function EarlierNight({ night, tonight, timeZone }: { night: MorningNight; tonig
   );
 }
 
+const inMicro = ({ value, u }: { value: number; u: number | null }) => ({
+  value: value * 1e6,
+  u: u === null ? null : u * 1e6,
+  unit: 'µrad/h',
+});
 const mean = (values: readonly number[]) => values.reduce((sum, value) => sum + value, 0) / values.length;
 
 /** Period, quality and torsion constant of this night beside the mean of those before. */
-export function Pendulum({ sheet: { tonight, earlier } }: { sheet: MorningSheet }) {
+export function Pendulum({ sheet: { tonight, earlier, drift } }: { sheet: MorningSheet }) {
   if (tonight?.period_s == null) return null;
   const nights = earlier.filter(({ control }) => !control);
   const before = (pick: (night: MorningNight) => number | null) => {
@@ -73,6 +78,12 @@ export function Pendulum({ sheet: { tonight, earlier } }: { sheet: MorningSheet 
             now={{ ...tonight.kappa_N_m, unit: 'N.m' }}
             before={before(({ kappa_N_m }) => kappa_N_m?.value ?? null)}
           />
+        )}
+        {drift === null ? null : (
+          <>
+            <Beside label="drift of the zero at the start" now={inMicro(drift.start)} before={null} />
+            <Beside label="at the end" now={inMicro(drift.end)} before={null} />
+          </>
         )}
       </Panel>
     </Section>

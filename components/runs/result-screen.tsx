@@ -10,6 +10,7 @@ import { useEvaluations } from '@/components/evaluation/use-evaluations';
 import { NightFigures } from '@/components/morning/believe';
 import { NearFar, Pendulum } from '@/components/morning/nights';
 import { RigNow } from '@/components/morning/rig-now';
+import { Room } from '@/components/morning/room';
 import { WhatNext, WorstMoments } from '@/components/morning/what-next';
 import { Body, Chip, Icon, Label, Loading, Panel, ProblemNotice, Screen, useWide } from '@/components/ui';
 import { readSamples } from '@/shared/contracts/data';
@@ -83,6 +84,7 @@ export function ResultScreen({ view }: { view: RunView }) {
       {wide ? null : next}
       {sheet === null ? null : <WorstMoments worst={sheet.worst} runId={view.id} timeZone={timeZone} />}
       {sheet === null ? null : <Pendulum sheet={sheet} />}
+      {sheet === null ? null : <Room room={sheet.room} />}
       <PairsPanel runId={view.id} rows={rows} timeZone={timeZone} />
       <RunAlarms runId={view.id} startedAt={view.startedAt} rehearsal={view.rehearsal} />
       <Links runId={view.id} />

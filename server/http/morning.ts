@@ -1,12 +1,13 @@
 import { verifyChain } from '@/shared/archive/chain';
-import type { ChainedEvent } from '@/shared/archive/run-records';
+import type { ChainedEvent, StepRow } from '@/shared/archive/run-records';
 import type { MorningNight, MorningSheet } from '@/shared/contracts/morning';
+import type { RoomChannel } from '@/shared/morning/room';
 import { morningSheet } from '@/shared/morning/sheet';
 import type { RecordFacts, SampleCover } from '@/shared/morning/ticks';
 import { planTimeline } from '@/shared/protocol/timeline';
 import { listEvaluations } from '../store/evaluations';
-import { nightsBefore, spacingOf } from '../store/nights';
-import { readEvents, readSteps, type RunRecord } from '../store/runs-read';
+import { nightsBefore, rangeAndMeans, spacingOf } from '../store/nights';
+import { channelsOfRun, readEvents, readSteps, type RunRecord } from '../store/runs-read';
 import { filledDeflection } from './channel-to-evaluate';
 import type { Services } from './services';
 
@@ -18,6 +19,7 @@ export async function morningOf(services: Services, run: RunRecord): Promise<Mor
   const own = { labId: run.labId, runId: run.id };
   const startedAtUtcMs = run.startedAt ?? run.createdAt;
   const events = await readEvents(db, own, { afterSeq: 0 });
+  const rows = await readSteps(db, own);
   const newest = (await listEvaluations(db, run.labId, run.id)).find(({ state, result }) => state === 'done' && result !== null);
   const angleDeg = run.start.rig.motion?.homeDeg ?? 0;
   return morningSheet({
@@ -26,10 +28,11 @@ export async function morningOf(services: Services, run: RunRecord): Promise<Mor
     startedAtUtcMs,
     endUtcMs: run.endedAt ?? services.clock.utcMs(),
     plan: planTimeline(run.start, { utcMs: startedAtUtcMs, angleDeg }),
-    rows: await readSteps(db, own),
+    rows,
     events,
     record: recordOf(services, events),
     cover: await coverOf(services, run, newest?.channel ?? run.start.protocol.evaluation?.channel ?? null),
+    room: await roomChannels(services, run, rows),
     result: newest?.result ?? null,
     earlier: await earlierNights(services, run),
   });
@@ -52,6 +55,21 @@ async function coverOf(services: Services, run: RunRecord, wanted: string | null
     ...{ channel: channel.name, samples: channel.samples, longestGapS },
     expected: everyS === null || everyS === 0 ? null : (window.toUtcMs - window.fromUtcMs) / 1000 / everyS,
   };
+}
+
+/** Channels of the surroundings with samples within the run. */
+async function roomChannels(services: Services, run: RunRecord, rows: readonly StepRow[]): Promise<RoomChannel[]> {
+  const window = { labId: run.labId, fromUtcMs: run.startedAt ?? run.createdAt, toUtcMs: run.endedAt ?? services.clock.utcMs() };
+  const spans = rows.flatMap(({ seq, kind, startUtcMs, endUtcMs }) =>
+    kind === 'dwell' && endUtcMs !== null ? [{ seq, fromUtcMs: startUtcMs, toUtcMs: endUtcMs }] : [],
+  );
+  const channels: RoomChannel[] = [];
+  for (const { id, name, unit, role } of await channelsOfRun(services.database.db, run)) {
+    if (role !== 'environment') continue;
+    const found = await rangeAndMeans(services.database, { ...window, channelId: id }, spans);
+    if (found !== null) channels.push({ name, unit, ...found });
+  }
+  return channels;
 }
 
 async function earlierNights(services: Services, run: RunRecord): Promise<MorningNight[]> {

@@ -61,3 +61,28 @@ export async function spacingOf(connection: Connection, window: SampleWindow): P
   );
   return { longestGapS: rows[0]?.gap ?? (window.toUtcMs - window.fromUtcMs) / 1000, usualS: rows[0]?.usual ?? null };
 }
+
+/** Least and greatest value of a channel within a window, and its mean within each of the spans; null without a sample. */
+export async function rangeAndMeans(
+  connection: Connection,
+  window: SampleWindow,
+  spans: readonly { seq: number; fromUtcMs: number; toUtcMs: number }[],
+): Promise<{ least: number; greatest: number; means: Map<number, number> } | null> {
+  const own = [window.labId, window.channelId];
+  const { rows: ranges } = await connection.pool.query<{ least: number | null; greatest: number | null }>(
+    'select min(value) as least, max(value) as greatest from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4',
+    [...own, new Date(window.fromUtcMs), new Date(window.toUtcMs)],
+  );
+  const [range] = ranges;
+  if (range?.least == null || range.greatest === null) return null;
+  const { rows } = await connection.pool.query<{ seq: number; mean: number | null }>(
+    `select seq, (select avg(value) from samples where lab_id = $1 and channel_id = $2 and at between since and until) as mean
+     from unnest($3::int[], $4::timestamptz[], $5::timestamptz[]) as span (seq, since, until)`,
+    [...own, spans.map(({ seq }) => seq), spans.map(({ fromUtcMs }) => new Date(fromUtcMs)), spans.map(({ toUtcMs }) => new Date(toUtcMs))],
+  );
+  return {
+    least: range.least,
+    greatest: range.greatest,
+    means: new Map(rows.flatMap(({ seq, mean }) => (mean === null ? [] : [[seq, mean]]))),
+  };
+}

@@ -57,6 +57,10 @@ export const morningSheetSchema = z.strictObject({
   G: withU.nullable(),
   /** Earlier nights on the rig that were evaluated, the newest first: five at most, and the newest control. */
   earlier: z.array(morningNightSchema),
+  /** Wander of the pendulum's zero between dwells on one side, at the beginning and at the end, rad/h; null where it cannot be told. */
+  drift: z.strictObject({ start: withU, end: withU }).nullable(),
+  /** Channels of the surroundings within the run: least and greatest value, and near minus far of their means, in their units. */
+  room: z.array(z.strictObject({ name: z.string(), unit: z.string(), least: z.number(), greatest: z.number(), inStep: withU.nullable() })),
   /** Shares of u²(G): what one more night makes smaller, and what only a measurement of the rig does. */
   shares: z.strictObject({ night: z.number(), geometry: z.number() }).nullable(),
   /** What cost most, three at most. */

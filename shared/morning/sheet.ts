@@ -7,6 +7,7 @@ import type { RigDocument } from '../rig/document';
 import { slipToleranceDeg } from '../rig/position-proof';
 import { type Loss, lossesOf, lostByCause } from './losses';
 import { nextNight, sharesOfBudget } from './next-night';
+import { driftOf, roomOf, type RoomChannel } from './room';
 import { morningTicks, type RecordFacts, type SampleCover } from './ticks';
 
 /** All that the sheet is read off. Times in UTC ms. */
@@ -22,6 +23,8 @@ export interface MorningFacts {
   events: readonly ChainedEvent[];
   record: RecordFacts;
   cover: SampleCover | null;
+  /** Channels of the surroundings that have samples within the run. */
+  room: readonly RoomChannel[];
   /** Of the newest evaluation that came to one. */
   result: EvaluationResult | null;
   earlier: readonly MorningNight[];
@@ -46,6 +49,8 @@ export function morningSheet(facts: MorningFacts): MorningSheet {
     tonight: nightOf(facts),
     G: result?.G == null ? null : { value: result.G.value, u: result.G.u },
     earlier: [...facts.earlier],
+    drift: driftOf(result, rows),
+    room: roomOf(facts.room, rows),
     shares: sharesOfBudget(result?.budget ?? null),
     worst: worstOf(losses),
     next: nextNight({ ticks, events, dwells, result }),

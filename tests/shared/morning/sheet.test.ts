@@ -65,6 +65,7 @@ const night: MorningFacts = {
   ...{ runId: 'run-1', rig: demoRigWide, startedAtUtcMs: start, endUtcMs: start + 124 * min, rows, events, result, earlier: [] },
   plan: { endUtcMs: start + 104 * min, dwells: 4, truncated: false },
   record: { events: 7, brokenAt: null },
+  room: [],
   cover: { channel: 'spot', samples: 9_950, expected: 10_000, longestGapS: 90 },
 };
 const tick = (facts: Partial<MorningFacts>, code: string) => morningSheet({ ...night, ...facts }).ticks.find((one) => one.code === code);
