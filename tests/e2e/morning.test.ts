@@ -42,6 +42,17 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.shoots('result');
   });
 
+  chapter('once evaluated it says what near minus far is, how the pendulum did, and what the next night would bring', async () => {
+    if (size === 'phone') await hand.taps('evaluate');
+    await hand.at('g-value').waitFor();
+    expect(await hand.reads('near-far', /mrad/)).toMatch(/\(\d+\).mrad.*The first evaluated night on this rig/);
+    expect(await hand.reads('ticks', /of the prediction|the prediction/)).toMatch(/Clock off by/);
+    await hand.reads('pendulum', /quality factor Q.*drift of the zero at the start.*µrad\/h/);
+    await hand.reads('next-night', /u\(G\)\/G/);
+    await hand.reads('may-go-in', /^May I go in\? No ?Armed for Ilse Marrowby/);
+    await hand.shoots('morning');
+  });
+
   chapter('the step log gives planned and actual times with their uncertainty', async () => {
     await hand.tapsOn('Step log', 'link');
     await hand.at('step-log').waitFor();
