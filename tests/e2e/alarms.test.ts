@@ -1,7 +1,7 @@
 import { demoIds } from '@/db/demo/seed';
 import { jobs } from '@/db/schema';
 import { sizes, type Size } from '../support/browser';
-import { chapters, Hand } from './support/hand';
+import { chapters, Hand, until } from './support/hand';
 import { labOfThisFile } from './support/lab';
 import { issued, shortNight, started } from './support/night';
 
@@ -86,11 +86,20 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.reads('alarm-state', /acknowledged, still there/);
   });
 
-  chapter('closed again it is over; the page of alarms keeps what happened', async () => {
+  chapter('closed again it is over; the run waits for somebody at the rig; the page of alarms keeps what happened', async () => {
     lab().server.world.controller(demoIds.rig).closeInterlock();
+    await lab().pass(2);
     const [run] = (await lab().server.as('viewer', 'GET', `/labs/${demoIds.lab}/runs?active=true`).expect(200)).body.items as {
       id: string;
     }[];
+    await hand.goes(`/runs/${run?.id ?? ''}`, 'held-notice');
+    await hand.reads('held-notice', 'The interlock was opened. Close it and arm the rig again on site, then resume.');
+    await hand.reads('resume-why', 'The rig is not armed.');
+    expect(await hand.isEnabled('resume')).toBe(false);
+    await hand.shoots('held-by-the-door');
+    await lab().server.arm(20);
+    await hand.goes(`/runs/${run?.id ?? ''}`, 'held-notice');
+    await until(() => hand.isEnabled('resume'), 'the run to be one that may go on');
     await lab()
       .server.intervene(run?.id ?? '', 'stop')
       .expect(202);

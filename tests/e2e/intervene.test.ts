@@ -1,3 +1,4 @@
+import type { Route } from 'playwright-core';
 import { demoIds } from '@/db/demo/seed';
 import type { ChainedEvent } from '@/shared/archive/run-records';
 import type { RunView } from '@/shared/contracts/runs';
@@ -79,6 +80,34 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await until(() => hand.isEnabled('start-run'), 'the start to be allowed');
     await hand.at('start-run').scrollIntoViewIfNeeded();
     await hand.shoots('start');
+  });
+
+  chapter('a start without a network is sent once and never by itself; one that comes late starts nothing', async () => {
+    const starts = /\/runs$/;
+    const sent: string[] = [];
+    hand.page.on('request', (request) => void (request.method() === 'POST' && starts.test(request.url()) && sent.push(request.url())));
+    await hand.page.route(starts, (route) => route.abort('connectionreset'));
+    await hand.keeps('start-run');
+    await hand.sees('No answer');
+    await hand.sees(/It counts for 5 s and was not sent again/);
+    await hand.shoots('start-unanswered');
+    await hand.page.unroute(starts);
+    // Tapped anew, and under way for longer than a tap counts.
+    const late = new Promise<void>((resolve, reject) => {
+      const arrive = async (route: Route) => {
+        await lab().pass(6);
+        // On a busy machine the page may have given it up by then.
+        await route.continue().catch(() => undefined);
+      };
+      void hand.page.route(starts, (route) => arrive(route).then(resolve, reject));
+    });
+    await hand.keeps('start-run');
+    await late;
+    await hand.sees(/The tap to start was made \d+ s ago|It counts for 5 s and was not sent again/);
+    await hand.page.unroute(starts);
+    await until(() => hand.isEnabled('start-run'), 'a start to be allowed again');
+    expect((await read(lab(), '?active=true&limit=20')).items).toEqual([]);
+    expect(sent).toHaveLength(2);
   });
 
   chapter('a tap starts nothing; a press that is kept starts the run', async () => {
