@@ -34,7 +34,7 @@ export function StepDetails({ path }: { path: StepPath }) {
         disabled={!editor.mayWrite}
         onChange={(next) => editor.replace(path, next)}
       />
-      {span === undefined ? null : (
+      {span === undefined || (findings.length > 0 && span.durationS === 0) ? null : (
         <Label>
           Takes {formatDuration(span.durationS)} by plan{span.count > 1 ? `, ${span.count} times` : ''}.
         </Label>

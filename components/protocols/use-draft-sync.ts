@@ -4,6 +4,7 @@ import { ApiProblem, ApiUnreachable, isProblem, labKey, useConnection, useLab, u
 import { listProtocols, saveProtocol } from '@/shared/contracts/protocols';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { dropBackup, keepBackup } from './draft-backup';
+import { oneAtATime } from './one-at-a-time';
 import { beginSave, saveReducer, type SaveEvent, type SaveState } from './save-reducer';
 
 const quietMs = 700;
@@ -45,32 +46,26 @@ export function useDraftSync({ protocolId, document, begin, mayWrite }: SyncInpu
     latest.current = { document, state };
   });
 
-  const underWay = useRef<Promise<string | null> | null>(null);
+  const inTurn = useRef(oneAtATime());
 
-  const flush = useCallback(async (): Promise<string | null> => {
-    // One save at a time: the next one is over what this one stored, not over what was there before it.
-    while (underWay.current !== null) await underWay.current;
+  const store = useCallback(async (): Promise<string | null> => {
     const now = latest.current;
     if (now.document === now.state.saved) return now.state.etag;
     if (!mayWrite || now.state.status === 'overtaken') return null;
     dispatch({ kind: 'sent' });
-    const store = async () => {
-      try {
-        const etag = await save(now.document, now.state.etag);
-        own.current.add(etag);
-        latest.current = { ...latest.current, state: { ...latest.current.state, etag, saved: now.document } };
-        dispatch({ kind: 'stored', etag, document: now.document, present: latest.current.document });
-        return etag;
-      } catch (error) {
-        dispatch(failureOf(error));
-        return null;
-      } finally {
-        underWay.current = null;
-      }
-    };
-    underWay.current = store();
-    return underWay.current;
+    try {
+      const etag = await save(now.document, now.state.etag);
+      own.current.add(etag);
+      latest.current = { ...latest.current, state: { ...latest.current.state, etag, saved: now.document } };
+      dispatch({ kind: 'stored', etag, document: now.document, present: latest.current.document });
+      return etag;
+    } catch (error) {
+      dispatch(failureOf(error));
+      return null;
+    }
   }, [mayWrite, save]);
+  // The next save is over what this one stored, not over what was there before it.
+  const flush = useCallback(() => inTurn.current(store), [store]);
 
   useEffect(() => dispatch({ kind: 'edited', document }), [document]);
   useKept(protocolId, document, state);

@@ -46,7 +46,7 @@ async function stopped(
   const copying = child('copying', database.url);
   await once(copying, 'message');
   const setting = { address, cookie, viewers: followers, stops: of.stops, ...load };
-  const latencyMs = await stopRuns(setting, of.writtenNs, {
+  const stopping = stopRuns(setting, of.writtenNs, {
     before: (number) => number % 2 === 1 && of.door.cut(),
     after: (told) => {
       of.door.open(port);
@@ -54,8 +54,10 @@ async function stopped(
     },
     logged: (told) => void violations.push(...wrongLog(told)),
   });
-  copying.disconnect();
-  await ended(copying);
+  const latencyMs = await stopping.finally(async () => {
+    copying.disconnect();
+    await ended(copying);
+  });
   const late = latencyMs.flatMap((ms, number) =>
     ms <= WITHIN_MS ? [] : [`stop ${String(number)} was on the line after ${ms.toFixed(0)} ms`],
   );

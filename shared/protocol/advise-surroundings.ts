@@ -3,8 +3,11 @@ import { formatClock } from '../lib/format-time';
 import type { Quantity, RigDocument } from '../rig/document';
 import type { RoomHours } from '../schedule/plan';
 import { againstRoom } from '../schedule/room';
+import type { ProtocolDocument } from './document';
 import type { Finding } from './finding';
 import { nextOccurrenceUtcMs } from './local-time';
+import { walkSteps } from './step-path';
+import { waitOf } from './wait';
 
 /** What stands around a protocol and a rig; what is not known is left out, and nothing is said of it. */
 export interface Surroundings {
@@ -12,9 +15,12 @@ export interface Surroundings {
   massSets?: readonly { sources: Pick<RigDocument['sources'], 'shape'> }[];
   /** All revisions of the rig, newest first. */
   revisions?: readonly { number: number; document: RigDocument }[];
+  /** Those of the rig that fill by themselves. */
+  channels?: readonly { name: string; role: string }[];
 }
 
 interface Night {
+  protocol: ProtocolDocument;
   startUtcMs: number;
   endUtcMs: number;
   timeZone: string;
@@ -22,12 +28,13 @@ interface Night {
   reverses: boolean;
 }
 
-/** Advice that needs more than protocol and rig: `late-finish`, `no-control`, `stale-calibration`. */
-export function adviseSurroundings({ room, massSets, revisions }: Surroundings, night: Night): Finding[] {
+/** Advice that needs more than protocol and rig: `late-finish`, `no-control`, `stale-calibration`, `waits-in-vain`. */
+export function adviseSurroundings({ room, massSets, revisions, channels }: Surroundings, night: Night): Finding[] {
   return [
     ...(room === undefined ? [] : lateFinish(room, night)),
     ...(massSets === undefined || !night.reverses ? [] : noControl(massSets)),
     ...(revisions === undefined ? [] : staleCalibration(revisions)),
+    ...(channels === undefined ? [] : waitsInVain(channels, night.protocol)),
   ];
 }
 
@@ -56,6 +63,22 @@ function noControl(massSets: NonNullable<Surroundings['massSets']>): Finding[] {
     `${sets}, so nothing can show how much of near − far comes from what is not attraction (heat, tilt, magnetism, draughts). ` +
       'Add an empty mass set of the same shape and heat to the rig, and run the same steps with it.',
   );
+}
+
+/** Steps that wait for what nothing of the rig measures; the start checks would refuse the run. */
+function waitsInVain(channels: NonNullable<Surroundings['channels']>, { steps }: ProtocolDocument): Finding[] {
+  const there = channels.map(({ name }) => name).join(', ');
+  const others = there === '' ? 'none fills yet' : `filled are: ${there}`;
+  return [...walkSteps(steps)].flatMap(({ step, path }) => {
+    const wait = waitOf(step);
+    if (wait === null || channels.some(({ name, role }) => (wait.channel === null ? role === 'deflection' : name === wait.channel)))
+      return [];
+    const what = wait.channel === null ? 'the deflection' : `the channel "${wait.channel}"`;
+    const message =
+      `This step waits for ${what}, which no device of this rig fills (${others}), so it would wait in vain for ${formatDuration(wait.atMostS)}. ` +
+      `Let a device fill it, ${wait.channel === null ? 'or settle for a fixed time' : 'or wait for another channel'}.`;
+    return [{ code: 'waits-in-vain', path, message }];
+  });
 }
 
 /** Figures of documents are as they were typed, so the same figure is the same number. */

@@ -45,7 +45,13 @@ export function adviseProtocol(document: ProtocolDocument, rig: RigDocument, sta
     ...onePerStep(otherSide(items, rig)),
     ...shapedPeriodUnknown(document, rig),
     ...adviseDocument(document, rig),
-    ...adviseSurroundings(start, { startUtcMs, endUtcMs, timeZone, reverses: new Set(sides.map(({ side }) => side)).size > 1 }),
+    ...adviseSurroundings(start, {
+      protocol: document,
+      startUtcMs,
+      endUtcMs,
+      timeZone,
+      reverses: new Set(sides.map(({ side }) => side)).size > 1,
+    }),
   ]);
 }
 

@@ -154,7 +154,7 @@ function kickParts(step: KickStep, rig: RigDocument, fromDeg: number): StepPart[
       urad === null ? 'kick-impossible' : 'kick-too-large',
       urad === null
         ? `A kick from ${degrees(fromDeg)} to ${degrees(target.targetDeg)} cannot be made: ${found.why}.`
-        : `A kick of ${step.amplitude_urad} µrad between ${degrees(fromDeg)} and ${degrees(target.targetDeg)} cannot be made: ${found.why}. Accepted is amplitude_urad below ${urad}.`,
+        : `A kick of ${step.amplitude_urad} µrad between ${degrees(fromDeg)} and ${degrees(target.targetDeg)} cannot be made: ${found.why}. Accepted is an amplitude below ${urad} µrad.`,
     );
   }
   return [

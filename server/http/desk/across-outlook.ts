@@ -1,8 +1,9 @@
 import type { RunView } from '@/shared/contracts/runs';
 import type { LineMessage } from '@/shared/contracts/link';
-import type { Cancel, Clock } from '@/server/interfaces/clock';
+import type { Clock } from '@/server/interfaces/clock';
 import type { ProcessMessage, ProcessPost, RigPlace, RigTold } from '@/server/interfaces/process-post';
 import { ProblemError } from '../problem-error';
+import { Repeated } from './repeated';
 import { longestSilenceMs, rigsAway, type RigDesk } from './rig-desk';
 import type { RigOutlook } from './rig-outlook';
 
@@ -31,10 +32,10 @@ const notDriven =
 /** What the process that drives a rig says of it, twice a second while pages of this one follow it. */
 export class AcrossOutlook implements RigOutlook {
   private readonly followed = new Map<string, Followed>();
-  private cancel: Cancel | null = null;
-  private closed = false;
+  private readonly asking: Repeated;
 
   constructor(private readonly parts: AcrossOutlookParts) {
+    this.asking = new Repeated(parts.clock, askEveryMs, () => this.askAgain());
     parts.post.onMessage((message) => this.hear(message));
   }
 
@@ -80,8 +81,7 @@ export class AcrossOutlook implements RigOutlook {
   }
 
   close(): void {
-    this.closed = true;
-    this.cancel?.();
+    this.asking.end();
   }
 
   private look({ labId, rigId }: RigPlace): Followed {
@@ -90,7 +90,7 @@ export class AcrossOutlook implements RigOutlook {
     followed.untilMs = this.parts.clock.monotonicMs() + followedMs;
     this.followed.set(rigId, followed);
     if (known === undefined) this.askFor([{ labId, rigId }]);
-    this.keepAsking();
+    this.asking.keep();
     return followed;
   }
 
@@ -107,18 +107,14 @@ export class AcrossOutlook implements RigOutlook {
     followed.waiting.clear();
   }
 
-  private keepAsking(): void {
-    if (this.cancel !== null || this.closed) return;
-    this.cancel = this.parts.clock.after(askEveryMs, () => {
-      this.cancel = null;
-      const nowMs = this.parts.clock.monotonicMs();
-      for (const { rigId, untilMs, waiting } of [...this.followed.values()])
-        if (untilMs <= nowMs && waiting.size === 0) this.followed.delete(rigId);
-      if (this.followed.size === 0) return;
-      const rigs = [...this.followed.values()].map(({ labId, rigId }) => ({ labId, rigId }));
-      this.askFor(rigs);
-      this.keepAsking();
-    });
+  /** Whether any page follows still. */
+  private askAgain(): boolean {
+    const nowMs = this.parts.clock.monotonicMs();
+    for (const { rigId, untilMs, waiting } of [...this.followed.values()])
+      if (untilMs <= nowMs && waiting.size === 0) this.followed.delete(rigId);
+    if (this.followed.size === 0) return false;
+    this.askFor([...this.followed.values()].map(({ labId, rigId }) => ({ labId, rigId })));
+    return true;
   }
 
   private askFor(rigs: readonly RigPlace[]): void {

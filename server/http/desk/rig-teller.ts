@@ -1,5 +1,6 @@
-import type { Cancel, Clock } from '@/server/interfaces/clock';
+import type { Clock } from '@/server/interfaces/clock';
 import type { ArrivedSamples, LiveChange, ProcessMessage, ProcessPost, RigPlace } from '@/server/interfaces/process-post';
+import { Repeated } from './repeated';
 import type { RigOutlook } from './rig-outlook';
 
 const beatMs = 500;
@@ -18,10 +19,10 @@ export interface TellerParts {
 export class RigTeller {
   private readonly followed = new Map<string, RigPlace & { untilMs: number }>();
   private readonly samples = new Map<string, ArrivedSamples[]>();
-  private cancel: Cancel | null = null;
-  private closed = false;
+  private readonly beats: Repeated;
 
   constructor(private readonly parts: TellerParts) {
+    this.beats = new Repeated(parts.clock, beatMs, () => this.beat());
     parts.post.onMessage((message) => this.hear(message));
   }
 
@@ -46,8 +47,7 @@ export class RigTeller {
   }
 
   close(): void {
-    this.closed = true;
-    this.cancel?.();
+    this.beats.end();
   }
 
   private hear(message: ProcessMessage): void {
@@ -59,20 +59,17 @@ export class RigTeller {
       this.followed.set(rigId, rig);
       if (isNew) this.tellOf(rig);
     }
-    this.keepBeating();
+    if (this.followed.size > 0) this.beats.keep();
   }
 
-  private keepBeating(): void {
-    if (this.cancel !== null || this.closed || this.followed.size === 0) return;
-    this.cancel = this.parts.clock.after(beatMs, () => {
-      this.cancel = null;
-      for (const rig of [...this.followed.values()]) {
-        if (rig.untilMs > this.parts.clock.monotonicMs() && this.parts.drives(rig.rigId)) this.tellOf(rig);
-        else this.followed.delete(rig.rigId);
-      }
-      this.tellSamples();
-      this.keepBeating();
-    });
+  /** Whether anybody follows still. */
+  private beat(): boolean {
+    for (const rig of [...this.followed.values()]) {
+      if (rig.untilMs > this.parts.clock.monotonicMs() && this.parts.drives(rig.rigId)) this.tellOf(rig);
+      else this.followed.delete(rig.rigId);
+    }
+    this.tellSamples();
+    return this.followed.size > 0;
   }
 
   private tellOf({ labId, rigId }: RigPlace): void {

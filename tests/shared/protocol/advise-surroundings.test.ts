@@ -10,7 +10,7 @@ const evening = Date.UTC(2031, 0, 14, 21, 0, 0);
 /** In Berlin it is 22:00 when the night begins. */
 const found = (around: Surroundings, utcMs = evening) =>
   adviseProtocol(short, demoRigWide, { utcMs, angleDeg: demoRigWide.motion?.homeDeg ?? 0, timeZone: 'Europe/Berlin', ...around }).filter(
-    ({ code }) => ['late-finish', 'no-control', 'stale-calibration'].includes(code),
+    ({ code }) => ['late-finish', 'no-control', 'stale-calibration', 'waits-in-vain'].includes(code),
   );
 const room = (from: string, until: string): Surroundings => ({ room: { nightWindow: { from, until }, blackouts: [] } });
 const changed = (change: (rig: RigDocument) => void): RigDocument => {
@@ -95,4 +95,43 @@ test('each is two sentences', () => {
   });
   expect(all.map(({ code }) => code)).toEqual(['late-finish', 'no-control', 'stale-calibration']);
   for (const { message } of all) expect(message.match(/[a-z0-9)][.](?= |$)/g)).toHaveLength(2);
+});
+
+describe('waits-in-vain', () => {
+  const waiting: ProtocolDocument = {
+    ...short,
+    steps: [
+      { kind: 'wait', until: { channel: 'box temperature', below: 30 } },
+      { kind: 'settle', calmWhen: { amplitude_urad: 30, window_s: 400 }, atMost_s: 1800 },
+      { kind: 'wait', until: { localTime: '22:00' } },
+      { kind: 'settle', for_s: 60 },
+    ],
+  };
+  const advised = (channels: NonNullable<Surroundings['channels']>) =>
+    adviseProtocol(waiting, demoRigWide, { utcMs: evening, angleDeg: 0, channels }).filter(({ code }) => code === 'waits-in-vain');
+
+  test('each step that waits for what nothing fills says so, and what there is', () => {
+    expect(advised([{ name: 'floor', role: 'environment' }])).toEqual([
+      {
+        code: 'waits-in-vain',
+        path: '1.wait',
+        message: expect.stringMatching(
+          /^This step waits for the channel "box temperature", which no device of this rig fills \(filled are: floor\), so it would wait in vain for 1.h 30.min\. Let a device fill it/u,
+        ),
+      },
+      {
+        code: 'waits-in-vain',
+        path: '2.settle',
+        message: expect.stringMatching(/the deflection.*for 30.min\. .*settle for a fixed time\.$/u),
+      },
+    ]);
+  });
+
+  test('what is filled is waited for in peace', () => {
+    const both = [
+      { name: 'box temperature', role: 'environment' },
+      { name: 'spot', role: 'deflection' },
+    ];
+    expect(advised(both)).toEqual([]);
+  });
 });

@@ -213,7 +213,7 @@ describe('kicks and shaped swings', () => {
   test('a kick beyond what any number of moves gives is refused with the limit', () => {
     const [finding] = check([home, near, kick(20_000)]);
     expect(finding).toMatchObject({ code: 'kick-too-large', path: '3.kick' });
-    expect(finding?.message).toMatch(/amplitude_urad below 1329\d/);
+    expect(finding?.message).toMatch(/an amplitude below 1329\d µrad/);
   });
 
   test('a shaped swing between equal rests is refused, and both without a measured decay', () => {
