@@ -181,6 +181,14 @@ const kinds = {
     consequence: 'Such dwells say less. They are made up where the protocol sets a limit and counts good ones.',
     answer: 'Traffic, a door, wind or a distant earthquake: look at the strip, and note what it was.',
   },
+  'few-good': {
+    ...morning,
+    title: 'Few good dwells',
+    cause: 'The run has passed half of its dwells, and fewer than half of those that are done are good.',
+    consequence: 'The night says less than was planned. The run goes on, and makes up what its protocol allows.',
+    answer: 'Read in the step log why they are not good. Where the night is not worth going on, hold after a whole pair, then stop.',
+    followsFrom: ['deflection-silent', 'residual-high', 'channel-silent', 'channel-level', 'channel-slope'],
+  },
   'channel-level': {
     ...morning,
     title: 'Channel beyond its limits',

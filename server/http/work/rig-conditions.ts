@@ -24,12 +24,17 @@ interface RunNow {
   startedUtcMs: number | null;
   /** The last dwell was noisier than an ordinary night's; null where it was not. */
   loud: { words: string; sinceUtcMs: number } | null;
+  dwells: { done: number; good: number; planned: number };
   /** Of the pendulum, s; null where it is not measured. */
   periodS: number | null;
 }
 
-export const runNowOf = ({ runId, state, reason, reasonCode, startedAtUtcMs, loud }: RunFacts, periodS: number | null): RunNow => ({
+export const runNowOf = (
+  { runId, state, reason, reasonCode, startedAtUtcMs, loud, ...facts }: RunFacts,
+  periodS: number | null,
+): RunNow => ({
   ...{ id: runId, state, reason, reasonCode, startedUtcMs: startedAtUtcMs, loud, periodS },
+  dwells: { done: facts.dwellsDone, good: facts.dwellsGood, planned: facts.dwellsPlanned },
 });
 
 /** What is seen of a rig at one moment. */
@@ -49,6 +54,8 @@ export interface RigNow {
 
 const silentMs = 60_000;
 const firstAnswerS = 60;
+/** With fewer dwells than these it is too early to say that few are good. */
+const leastDwells = 4;
 const atRest: RunState[] = ['holding', 'held'];
 const atWork: RunState[] = ['starting', 'running', ...atRest];
 
@@ -81,6 +88,8 @@ export function conditionsOf(now: RigNow): Condition[] {
       ...run.loud,
       ...(run.periodS === null ? {} : { onDelayS: Math.round(run.periodS) }),
     });
+  const few = run === null ? null : fewGood(run.dwells);
+  if (few !== null) add('few-good', few);
   const silent = silentSince(now);
   if (silent !== null)
     found.push({
@@ -92,6 +101,12 @@ export function conditionsOf(now: RigNow): Condition[] {
       onDelayS: silentMs / 1000,
     });
   return found;
+}
+
+/** From half time on, fewer than half of the dwells are good: in words; else null. */
+function fewGood({ done, good, planned }: RunNow['dwells']): string | null {
+  if (done < leastDwells || 2 * done < planned || 2 * good >= done) return null;
+  return `${String(good)} of ${String(done)} dwells are good so far; ${String(planned)} are planned.`;
 }
 
 /** Since when the deflection of a run is silent; null where it is not, or where none was flowing when the run began. */
@@ -106,7 +121,7 @@ const slow: readonly AlarmCode[] = ['excursion', 'channel-level', 'channel-slope
 /** Kinds that a look can tell to be over; others end by what somebody does. */
 const watched: readonly AlarmCode[] = [
   ...(['unexpected-motion', 'limit', 'interlock', 'supply', 'controller-reset', 'proof-failed', 'home-edge', 'held'] as const),
-  ...(['no-response', 'no-deflection', 'not-taken-up', 'link-lost', 'deflection-silent', 'residual-high', 'disk-low'] as const),
+  ...(['no-response', 'no-deflection', 'not-taken-up', 'link-lost', 'deflection-silent', 'residual-high', 'few-good', 'disk-low'] as const),
   ...slow,
 ];
 

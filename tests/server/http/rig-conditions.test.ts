@@ -19,6 +19,7 @@ const running: NonNullable<RigNow['run']> = {
   reasonCode: '',
   startedUtcMs: utcMs - 3_600_000,
   loud: null,
+  dwells: { done: 0, good: 0, planned: 32 },
   periodS: 420,
 };
 const codesOf = (now: Partial<RigNow>) => conditionsOf({ ...quiet, ...now }).map(({ code }) => code);
@@ -64,4 +65,14 @@ test('a dwell noisier than usual is told when a period has passed since it began
   expect(conditionsOf({ ...quiet, run: { ...running, loud } })).toMatchObject([
     { code: 'residual-high', ...loud, onDelayS: 420, runId: 'run' },
   ]);
+});
+
+test.each([
+  ['before half time', { done: 15, good: 2, planned: 32 }, null],
+  ['from half time on', { done: 16, good: 7, planned: 32 }, '7 of 16 dwells are good so far; 32 are planned.'],
+  ['half of them good', { done: 16, good: 8, planned: 32 }, null],
+  ['too few to say', { done: 3, good: 0, planned: 4 }, null],
+])('few good dwells: %s', (_, dwells, words) => {
+  const found = conditionsOf({ ...quiet, run: { ...running, dwells } });
+  expect(found).toEqual(words === null ? [] : [expect.objectContaining({ code: 'few-good', words, runId: 'run' })]);
 });
