@@ -75,8 +75,7 @@ soak('r7', async (args) => {
   const found: Findings[] = [];
   await withServerHere({ ear, through: (url) => door.through(url) }, async (here) => {
     found.push(await stopped(here, { stops, door, writtenNs }));
-  });
-  door.end();
+  }).finally(() => door.end());
   const { latencyMs = [], violations = [] } = found[0] ?? {};
   return {
     ok: violations.length === 0,

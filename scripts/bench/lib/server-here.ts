@@ -79,8 +79,10 @@ export async function withServerHere(
       });
       const address = await server.listen();
       await server.start();
-      await work({ server, address, database, clock }).finally(() => server.stop());
-      if (own !== database.connection) await own.close();
+      await work({ server, address, database, clock }).finally(async () => {
+        await server.stop();
+        if (own !== database.connection) await own.close();
+      });
     });
   } finally {
     rmSync(stateDir, { recursive: true, force: true });
