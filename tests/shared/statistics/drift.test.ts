@@ -13,8 +13,11 @@ describe('the cost of removing drift', () => {
   test.each([
     { n: 4, aba: 1.25, first: 1.25, second: 1.25 },
     { n: 5, aba: 1.25, first: 1.0416667, second: 1.3671875 },
+    { n: 6, aba: 1.21875, first: 1.09375, second: 1.09375 },
     { n: 8, aba: 1.1666667, first: 1.05, second: 1.05 },
+    { n: 10, aba: 1.1328125, first: 1.03125, second: 1.03125 },
     { n: 16, aba: 1.081632653, first: 1.011904762, second: 1.011904762 },
+    { n: 30, aba: 1.042729592, first: 1.003348214, second: 1.003348214 },
     { n: 48, aba: 1.026465028, first: 1.001304348, second: 1.001304348 },
   ])('is as published for $n dwells', ({ n, aba, first, second }) => {
     const series = alternating(zeros(n));
