@@ -1,5 +1,4 @@
 import { parseArgs } from 'node:util';
-import { NotYetError } from '@/shared/lib/not-yet-error';
 import { adviseNight } from '@/shared/planning/advise-night';
 import { peakExcursionRad } from '@/shared/planning/excursion';
 import { predictU } from '@/shared/planning/plan-uncertainty';
@@ -89,8 +88,7 @@ export function main(args: readonly string[], output: Output = toProcess): numbe
     output.out(`${JSON.stringify(makePlan(document, rig), null, 2)}\n`);
     return 0;
   } catch (error) {
-    if (error instanceof NotYetError) output.err(`plan: ${error.message} [${error.code}]\n`);
-    else if (error instanceof Unusable) output.err(`plan: ${error.message}\n`);
+    if (error instanceof Unusable) output.err(`plan: ${error.message}\n`);
     else throw error;
     return 2;
   }

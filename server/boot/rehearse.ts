@@ -5,7 +5,6 @@ import packageJson from '@/package.json';
 import { buildArchive } from '@/shared/archive/build-archive';
 import { canonicalJson } from '@/shared/archive/chain';
 import type { RunStart, SimulatedRun } from '@/shared/archive/run-records';
-import { NotYetError } from '@/shared/lib/not-yet-error';
 import { CODATA_2022_G } from '@/shared/physics/constants';
 import { oscillatorOf } from '@/shared/physics/oscillator';
 import { geometryOf } from '@/shared/physics/torque';
@@ -55,7 +54,6 @@ interface Request extends Choice {
 
 function requested(args: readonly string[]): Request {
   const { values, positionals } = parsedArguments(args);
-  if (values['draw-geometry']) throw new NotYetError('--draw-geometry is not built yet: the geometry is exactly as in the rig document.');
   const { document, rig } = chosenProtocol({ positionals, template: values.template, rig: values.rig, usage });
   const startUtcMs = instant(values.start);
   const simulated = {
@@ -63,6 +61,7 @@ function requested(args: readonly string[]): Request {
     seed: wholeNumber('--seed', values.seed),
     rateHz: sampleRate(values.rate),
     faults: values.fault.map(faultOf),
+    ...(values['draw-geometry'] ? { drawGeometry: true as const } : {}),
   };
   return { document, rig, startUtcMs, simulated, board: values.board, folder: emptyFolder(values.out) };
 }
@@ -228,8 +227,7 @@ export async function main(args: readonly string[], output: Output = toProcess):
     output.out(`${JSON.stringify(await run(args))}\n`);
     return 0;
   } catch (error) {
-    if (error instanceof NotYetError) output.err(`rehearse: ${error.message} [${error.code}]\n`);
-    else if (error instanceof BeyondFirmware) output.err(`rehearse: The rig cannot be driven by the controller board: ${error.message}\n`);
+    if (error instanceof BeyondFirmware) output.err(`rehearse: The rig cannot be driven by the controller board: ${error.message}\n`);
     else if (error instanceof Unusable) output.err(`rehearse: ${error.message}\n`);
     else throw error;
     return 2;

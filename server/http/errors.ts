@@ -1,5 +1,4 @@
 import * as z from 'zod';
-import { NotYetError } from '@/shared/lib/not-yet-error';
 import { isDatabaseAway, isGivenUp } from '../store/failures';
 import { ProblemError, type ProblemItem } from './problem-error';
 
@@ -62,7 +61,6 @@ const haltWords = (haltsAnyway: boolean) =>
  */
 export function problemErrorOf(error: unknown, databaseAwaySinceUtcMs: number | null = null, haltsAnyway = true): ProblemError {
   if (error instanceof ProblemError) return error;
-  if (error instanceof NotYetError) return new ProblemError('not-yet', error.message);
   if (isErrorLike(error)) {
     const known = typeof error.type === 'string' ? bodyErrors[error.type] : undefined;
     if (known !== undefined) return known();

@@ -31,6 +31,8 @@ export interface SimulatedRun {
   seed: number;
   rateHz: number;
   faults: { kind: string; atS: number }[];
+  /** The simulated rig differs from its document by what the document's uncertainties admit, drawn from the seed. */
+  drawGeometry?: true;
 }
 
 export type StepRowKind = 'home' | 'swing' | 'dwell' | 'kick' | 'ring-down' | 'settle' | 'wait' | 'proof' | 'mark' | 'prompt' | 'rotate';

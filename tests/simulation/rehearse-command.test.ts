@@ -158,6 +158,20 @@ test.each(templates)('the template $id goes through to its end', async ({ id, ma
   expect(answer(out)).toMatchObject({ outcome: 'finished', holds: 0 });
 });
 
+test('a geometry is drawn from what the rig document admits: the archive holds the document, and the pendulum feels another rig', async () => {
+  const angles = (name: string) => readFileSync(at(`${name}/channels/deflection.csv`), 'utf8');
+  for (const [name, more] of [
+    ['plain', []],
+    ['drawn', ['--draw-geometry']],
+    ['again', ['--draw-geometry']],
+  ] as const)
+    expect((await command(short(), '--rate', '1', ...more, '--out', at(name))).code).toBe(0);
+  expect(JSON.parse(readFileSync(at('drawn/run.json'), 'utf8'))).toMatchObject({ simulated: { seed: 1, drawGeometry: true } });
+  expect(readFileSync(at('drawn/rig.json'), 'utf8')).toBe(readFileSync(at('plain/rig.json'), 'utf8'));
+  expect(angles('drawn')).toBe(angles('again'));
+  expect(angles('drawn')).not.toBe(angles('plain'));
+});
+
 test('a rig whose masses may not pass the balls goes through as well', async () => {
   const { out } = await command('--template', 'proof', '--rig', file('narrow.json', demoRigNarrow), '--out', at('narrow'), '--rate', '0.1');
   expect(answer(out)).toMatchObject({ outcome: 'finished', holds: 0 });
@@ -207,7 +221,6 @@ describe('unusable input ends with 2, a sentence, and no folder', () => {
     ['more samples than fit into memory', [file('month.json', month), '--rate', '10'], 'Accepted is a --rate up to 1.9'],
     ['a G that is none', [short(), '--true-g', 'big'], '--true-g big'],
     ['a start without a zone', [short(), '--start', '2000-01-01T00:00:00'], '--start'],
-    ['a drawn geometry', [short(), '--draw-geometry'], 'not built yet'],
     ['an unknown fault', [short(), '--fault', 'earthquake@10'], 'KIND@SECONDS'],
     ['a fault without its second', [short(), '--fault', 'garbage'], 'KIND@SECONDS'],
     ['an unknown option', [short(), '--speed', '3'], 'speed'],

@@ -8,6 +8,7 @@ import { RunDriver } from '../run-driver';
 import type { RunFacts } from '../run-facts';
 import { VirtualClock } from '../virtual-clock';
 import { DeflectionSeries } from './deflection';
+import { drawnRig } from './drawn-rig';
 import { scheduleFaults, SERVER_AWAY_MS } from './rehearsal-faults';
 import { ReadoutFaults } from './readout-faults';
 import type { RehearsalParts } from './rehearsal-parts';
@@ -58,9 +59,19 @@ export async function rehearse({ start, startUtcMs }: RehearsalInput, parts: Reh
   });
   await clock.advance(PREPARE_MS);
 
-  const balance = createSimulatedBalance({ rig, bigG: simulated.trueG, seed: simulated.seed, rateHz: simulated.rateHz, startUtcMs });
+  const actual = simulated.drawGeometry === true ? drawnRig(rig, simulated.seed) : { rig, angleDeg: (countedDeg: number) => countedDeg };
+  const angleDegAt = (utcMs: number) => actual.angleDeg(controller.trueAngleDegAt(utcMs));
+  const startDeg = actual.angleDeg(motion.homeDeg);
+  const balance = createSimulatedBalance({
+    rig: actual.rig,
+    startDeg,
+    bigG: simulated.trueG,
+    seed: simulated.seed,
+    rateHz: simulated.rateHz,
+    startUtcMs,
+  });
   const readout = new ReadoutFaults();
-  const sample = () => deflection.append(readout.spoil(balance.advance({ toUtcMs: clock.utcMs(), angleDegAt: controller.trueAngleDegAt })));
+  const sample = () => deflection.append(readout.spoil(balance.advance({ toUtcMs: clock.utcMs(), angleDegAt })));
   const sampleOn = () => {
     sample();
     clock.after(SAMPLE_BATCH_MS, sampleOn);
