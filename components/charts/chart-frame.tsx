@@ -55,28 +55,43 @@ interface AxesProps {
   /** Ticks of x stand under this box; false for all but the lowest of boxes that share x. */
   showX?: boolean;
   formatX?: (x: number) => string;
+  formatY?: (y: number) => string;
+  /** Where the ticks stand, instead of at round values. */
+  at?: { x: readonly number[]; y: readonly number[] };
   children?: ReactNode;
 }
 
 /** Round ticks, hairlines, and the units once at the axes' ends. */
-export function Axes({ box, scale, colors, xUnit = '', yUnit = '', xTicks = 4, yTicks = 4, showX = true, formatX }: AxesProps) {
+export function Axes({
+  box,
+  scale,
+  colors,
+  xUnit = '',
+  yUnit = '',
+  xTicks = 4,
+  yTicks = 4,
+  showX = true,
+  formatX,
+  formatY,
+  at,
+}: AxesProps) {
   const { toX, toY } = mapInto(box, scale);
   const xs = niceTicks(scale.x[0], scale.x[1], xTicks);
   const ys = niceTicks(scale.y[0], scale.y[1], yTicks);
   const bottom = box.top + box.height;
   return (
     <G>
-      {ys.values.map((y) => (
+      {(at?.y ?? ys.values).map((y) => (
         <G key={y}>
           <Line x1={box.left} x2={box.left + box.width} y1={toY(y)} y2={toY(y)} stroke={colors.line} strokeWidth={1} />
           <SvgText x={box.left - 6} y={toY(y) + 4.5} textAnchor="end" fontSize={13} fontFamily={numberFont} fill={colors.dim}>
-            {formatFixed(y, { decimals: ys.decimals })}
+            {formatY ? formatY(y) : formatFixed(y, { decimals: ys.decimals })}
           </SvgText>
         </G>
       ))}
       <Line x1={box.left} x2={box.left + box.width} y1={bottom} y2={bottom} stroke={colors.faint} strokeWidth={1} />
       {showX
-        ? xs.values.map((x) => (
+        ? (at?.x ?? xs.values).map((x) => (
             <G key={x}>
               <Line x1={toX(x)} x2={toX(x)} y1={bottom} y2={bottom + 4} stroke={colors.faint} strokeWidth={1} />
               <SvgText x={toX(x)} y={bottom + 18} textAnchor="middle" fontSize={13} fontFamily={numberFont} fill={colors.dim}>

@@ -3,6 +3,7 @@ export { stepsOfLog, stepsOfPlan, standsOf, laneOf, type Lane, type PlannedStep,
 export { nowWindow, wholeWindow, type StripWindow } from './strip-geometry';
 export { PlanView } from './plan-view';
 export { GScale } from './g-scale';
+export { AllanPlot } from './allan-plot';
 export { BudgetBars } from './budget-bars';
 export { FitPlot } from './fit-plot';
 export { ReversalPlot } from './reversal-plot';

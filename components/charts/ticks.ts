@@ -23,3 +23,10 @@ export function niceTicks(from: number, to: number, count: number): { values: nu
   const twoDigits = Math.abs(step / 10 ** Math.floor(Math.log10(step)) - 2.5) < 1e-9;
   return { values, decimals: Math.max(0, -Math.floor(Math.log10(step) + 1e-9) + (twoDigits ? 1 : 0)) };
 }
+
+/** Round values of a logarithmic axis from 10^from to 10^to, as logarithms: 1, 2, 5, … or, over two decades and more, powers of ten. */
+export function logTicks(from: number, to: number): number[] {
+  const digits = to - from > 2 ? [1] : [1, 2, 5];
+  const decades = Array.from({ length: Math.floor(to) - Math.floor(from) + 1 }, (_, k) => Math.floor(from) + k);
+  return decades.flatMap((decade) => digits.map((digit) => decade + Math.log10(digit))).filter((at) => at >= from && at <= to);
+}

@@ -4,11 +4,12 @@ import { View } from 'react-native';
 import { addressOf, useLab, useLabQuery, wordsOf } from '@/components/api';
 import { ReversalPlot } from '@/components/charts';
 import { DownloadLink } from '@/components/runs/download-link';
-import { Body, Icon, Label, Loading, Panel, ProblemNotice, Screen, Section, Select, useWide } from '@/components/ui';
+import { Icon, Label, Loading, ProblemNotice, Screen, Section, Select, useWide } from '@/components/ui';
 import type { EvaluationView, ListedEvaluation } from '@/shared/contracts/evaluations';
 import { downloadArchive, getRun, type RunView } from '@/shared/contracts/runs';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { formatDayAndClock } from '@/shared/lib/format-time';
+import { AllanPanel } from './allan-panel';
 import { BudgetPanel } from './budget-panel';
 import { DwellList } from './dwell-list';
 import { EvaluatePanel } from './evaluate-panel';
@@ -17,6 +18,10 @@ import { FiguresPanel } from './figures-panel';
 import { FitPanel } from './fit-panel';
 import { FreezePanel } from './freeze-panel';
 import { GPanel } from './g-panel';
+import { MethodsPanel } from './methods-panel';
+import { SurroundingsPanel } from './surroundings-panel';
+import { TryPanel } from './try-panel';
+import { WarningsPanel } from './warnings-panel';
 import { useEvaluation, useEvaluations } from './use-evaluations';
 
 /** The newest evaluation of a run, or an older one that is chosen: G, how well it is known and why, and everything it was made from. */
@@ -75,7 +80,7 @@ function Evaluated({ view, evaluation, result, panel, back, choice, freeze }: Ev
   const curves = evaluation.curves ?? [];
   const [selected, setSelected] = useState<number | null>(curves[0]?.seq ?? null);
   const dwells = <DwellList dwells={result.dwells} selected={selected} onSelect={setSelected} />;
-  const fit = <FitPanel curves={curves} selected={selected} onSelect={setSelected} />;
+  const fit = <FitPanel runId={view.id} curves={curves} selected={selected} onSelect={setSelected} />;
   return (
     <Screen
       title="Evaluation"
@@ -97,13 +102,22 @@ function Evaluated({ view, evaluation, result, panel, back, choice, freeze }: Ev
         trueG={view.simulated?.trueG ?? null}
       />
       <FiguresPanel result={result} />
-      <Warnings warnings={result.warnings} />
+      <WarningsPanel
+        warnings={result.warnings}
+        firstLeftOut={result.dwells.find(({ used }) => !used)?.seq ?? null}
+        run={view}
+        onDwell={setSelected}
+      />
       <Section title="Reversals" remark="Near − far of adjacent dwells; the band is the mean ± u.">
         <ReversalPlot result={result} />
       </Section>
       {wide ? null : fit}
       {wide ? null : dwells}
       <BudgetPanel lines={result.budget} rig={view.rig} />
+      <TryPanel result={result} rig={view.rig} basis={evaluation.basis} />
+      <MethodsPanel result={result} />
+      <AllanPanel curves={curves} />
+      <SurroundingsPanel result={result} />
       <Chain chain={result.chain} />
       <View className="flex-row flex-wrap items-center gap-3">
         <DownloadLink
@@ -140,20 +154,6 @@ function Choice({ evaluations, shown, onChoose }: ChoiceProps) {
     label: `${formatDayAndClock(Date.parse(createdAt), timeZone)} by ${createdBy}${frozen === null ? '' : ', frozen'}`,
   }));
   return <Select label="Evaluation" value={shown} options={options} onChange={onChoose} testID="which-evaluation" />;
-}
-
-function Warnings({ warnings }: { warnings: EvaluationResult['warnings'] }) {
-  if (warnings.length === 0) return null;
-  return (
-    <Panel edge="lamp" className="gap-2" testID="warnings">
-      {warnings.map((warning) => (
-        <View key={warning.code + warning.message} className="flex-row items-start gap-2">
-          <Icon name="warning" size={18} tone="lamp" />
-          <Body className="min-w-0 flex-1">{warning.message}</Body>
-        </View>
-      ))}
-    </Panel>
-  );
 }
 
 function Chain({ chain }: { chain: EvaluationResult['chain'] }) {

@@ -1,6 +1,10 @@
-import { formatSignificant } from '@/shared/lib/format-number';
+import { formatDuration } from '@/shared/lib/format-duration';
+import { formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
+import { formatUncertain } from '@/shared/lib/format-uncertain';
 import { registeredDifferences } from '@/shared/evaluation/registered-differences';
-import type { EvaluationResult } from '@/shared/evaluation/result';
+import { whiteUntil, type ResidualAllanPoint } from '@/shared/evaluation/residual-allan';
+import type { EvaluationResult, RegressionResult } from '@/shared/evaluation/result';
+import { studentTProbability } from '@/shared/statistics/student-t';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { RigDocument } from '@/shared/rig/document';
 
@@ -52,3 +56,45 @@ const methods: Record<EvaluationResult['method'], string> = {
   modulation: 'modulation method',
 };
 export const methodWords = (method: EvaluationResult['method']): string => methods[method];
+
+/** Whether another method agrees with the result: En = d / (2 u(d)), within ± 1 for agreement. Null: it cannot be told. */
+export function agreementOf({ value, u }: { value: number; u: number | null }): { agrees: boolean | null; words: string } {
+  const difference = formatUncertain({ value, u, unit: UNIT_OF_G }, { signed: true });
+  if (u === null || u === 0)
+    return { agrees: null, words: `differs from the result by ${difference}; without a u nobody can say whether they agree` };
+  const En = value / (2 * u);
+  const agrees = Math.abs(En) <= 1;
+  const words = `differs from the result by ${difference}, En ${formatSignificant(En, 2)}: ${agrees ? 'agrees' : 'disagrees'} at k = 2`;
+  return { agrees, words };
+}
+
+/** How sure it is that the dwells go with a channel, and by how many it was told. */
+export function regressionWords({ coefficient: { value, u }, dwells, degreesOfFreedom }: RegressionResult): string {
+  const chance = 2 * studentTProbability(-Math.abs(value) / u, degreesOfFreedom);
+  const rare = chance < 0.001 ? 'under 0.1\u202f% of the time' : `${formatPercent(chance)} of the time`;
+  return `pendulum angle over the channel, ${dwells} dwells; chance alone would show as much ${rare}`;
+}
+
+/** What the Allan deviation says, for those who do not see the plot and those who do; null for too few points. */
+export function allanWords(points: readonly ResidualAllanPoint[]): string | null {
+  const [first] = points;
+  const told = whiteUntil(points);
+  if (first === undefined || told === null) return null;
+  const start = `${formatUncertain({ value: first.deviationRad * 1e6, u: first.u * 1e6, unit: 'µrad' })} at ${formatDuration(first.tauS)}`;
+  if (told.departs === null) return `${start}; from there it falls as white noise does, up to ${formatDuration(told.untilS)}.`;
+  const beyond =
+    told.untilS === first.tauS ? 'From there on' : `It falls as white noise does up to ${formatDuration(told.untilS)}; beyond that`;
+  const departs =
+    told.departs === 'above'
+      ? 'it stands above: something slower than the readout is left, such as seismic noise, a wandering zero or a motion that the fit does not know'
+      : 'it stands below, because the fit takes slow parts out or the noise of the readout is not white';
+  return `${start}. ${beyond} ${departs}.`;
+}
+
+/** What a trial does to G and to its u, in words. */
+export function changeWords(now: { value: number; u: number | null }, then: { value: number; u: number | null }): string {
+  const change = `${formatUncertain({ value: then.value - now.value, u: null, unit: UNIT_OF_G }, { signed: true })} from the result`;
+  if (now.u === null || then.u === null || now.value === 0 || then.value === 0) return change;
+  const relative = (of: { value: number; u: number | null }) => formatPercent((of.u ?? 0) / Math.abs(of.value), 3);
+  return `${change}; u ${relative(then)} of G instead of ${relative(now)}`;
+}

@@ -1,16 +1,19 @@
+import { useRouter, type Href } from 'expo-router';
 import { View } from 'react-native';
 import { FitPlot } from '@/components/charts';
-import { Heading, IconButton, Label, Panel } from '@/components/ui';
+import { Button, Heading, IconButton, Label, Panel } from '@/components/ui';
 import type { FitCurve } from '@/shared/evaluation/result';
 
 interface FitPanelProps {
+  runId: string;
   curves: readonly FitCurve[];
   selected: number | null;
   onSelect: (seq: number) => void;
 }
 
-/** The fit of one dwell, with the way to the one before and after. */
-export function FitPanel({ curves, selected, onSelect }: FitPanelProps) {
+/** The fit of one dwell, with the way to the one before and after, and to what happened at that time. */
+export function FitPanel({ runId, curves, selected, onSelect }: FitPanelProps) {
+  const router = useRouter();
   const at = Math.max(
     0,
     curves.findIndex((curve) => curve.seq === selected),
@@ -36,6 +39,13 @@ export function FitPanel({ curves, selected, onSelect }: FitPanelProps) {
         </View>
       </View>
       <FitPlot curve={curve} />
+      <Button
+        kind="quiet"
+        label="This dwell in the step log"
+        onPress={() => router.push(`/runs/${runId}/log?row=${curve.seq}` as Href)}
+        className="self-start"
+        testID="fit-log"
+      />
     </Panel>
   );
 }

@@ -5,6 +5,7 @@ import { useMay } from '@/components/api';
 import { MayNote } from '@/components/people/may-note';
 import { Button, fileNameOf, Section, saveTextFile } from '@/components/ui';
 import type { RigView } from '@/shared/contracts/rigs';
+import { BudgetFirstPanel } from './budget-first-panel';
 import type { DocumentRow } from './document-rows';
 import { DocumentList } from './document-list';
 import { FibrePanel } from './fibre-panel';
@@ -61,6 +62,7 @@ export function RigDocumentSection({ rig, etag }: { rig: RigView; etag: string |
         changed={draft.changes.map((change) => change.path)}
         onPress={mayEdit ? (row) => setSheet({ kind: 'quantity', row }) : undefined}
       />
+      <BudgetFirstPanel document={draft.document} />
       <FibrePanel document={draft.document} />
       {sheet?.kind === 'quantity' ? <QuantitySheet row={sheet.row} draft={draft} onClose={close} /> : null}
       {sheet?.kind === 'import' ? <RigImportSheet onDocument={draft.set} onClose={close} /> : null}

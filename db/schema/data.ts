@@ -2,6 +2,7 @@ import { sql } from 'drizzle-orm';
 import { bigint, doublePrecision, foreignKey, index, integer, json, pgTable, primaryKey, text, uniqueIndex } from 'drizzle-orm/pg-core';
 import type * as z from 'zod';
 import type { importMappingSchema, importPreviewSchema } from '../../shared/contracts/data';
+import type { GBasis } from '@/shared/evaluation/g-basis';
 import type { EvaluationResult, FitCurve } from '../../shared/evaluation/result';
 import { bytea, instant, key } from './columns';
 import { labs } from './labs';
@@ -150,6 +151,8 @@ export const evaluations = pgTable(
     error: text('error'),
     result: json('result').$type<EvaluationResult>(),
     curves: json('curves').$type<FitCurve[]>(),
+    /** What G was computed from, for values that are tried; null where there is none. */
+    basis: json('basis').$type<GBasis>(),
     /** Version of the software that computed the result; null before it ends, and where none was kept. */
     software: text('software'),
     /** The frozen evaluation that this one computes again. */

@@ -19,7 +19,7 @@ export const heavyTasks: HeavyTasks = {
   zipArchive: async (input) => zipArchive(buildArchive(input, sha256Hex)),
   evaluate: async (input, { channel }) => {
     const archive = readArchive(buildArchive(input, sha256Hex), sha256Hex);
-    const { result, curves } = evaluateArchive(archive, { trials, ...(channel === null ? {} : { channel }) });
-    return { result, curves };
+    const { result, curves, basis } = evaluateArchive(archive, { trials, besides: true, ...(channel === null ? {} : { channel }) });
+    return { result, curves, basis };
   },
 };

@@ -1,5 +1,6 @@
 import type { BuildArchiveInput } from '@/shared/archive/build-archive';
 import type { ChainedEvent, ChannelSeries, RunStart, SimulatedRun, StepRow } from '@/shared/archive/run-records';
+import type { GBasis } from '@/shared/evaluation/g-basis';
 import type { EvaluationResult, FitCurve } from '@/shared/evaluation/result';
 
 /** What a rehearsal leaves to be stored. */
@@ -14,6 +15,14 @@ export interface RehearsalRecords {
   endedAtUtcMs: number;
 }
 
+/** What an evaluation leaves to be stored. */
+export interface EvaluationWork {
+  result: EvaluationResult;
+  curves: FitCurve[];
+  /** For values tried later; null without a G by equilibria. */
+  basis: GBasis | null;
+}
+
 /** Work of seconds that must not hold up the loop which drives the rigs: done in worker threads. */
 export interface HeavyTasks {
   rehearse(input: { start: RunStart & { simulated: SimulatedRun }; startUtcMs: number }): Promise<RehearsalRecords>;
@@ -23,5 +32,5 @@ export interface HeavyTasks {
    * Evaluates the archive that `zipArchive` would give.
    * @throws Error whose message says what makes the archive unusable
    */
-  evaluate(input: BuildArchiveInput, options: { channel: string | null }): Promise<{ result: EvaluationResult; curves: FitCurve[] }>;
+  evaluate(input: BuildArchiveInput, options: { channel: string | null }): Promise<EvaluationWork>;
 }

@@ -1,10 +1,12 @@
 import { and, desc, eq, inArray, isNotNull, isNull } from 'drizzle-orm';
 import { evaluations } from '@/db/schema';
-import type { EvaluationResult, FitCurve } from '@/shared/evaluation/result';
+import type { EvaluationWork } from '../interfaces/heavy-tasks';
 import { one, type Handle, type Transaction } from './database';
 import { enqueueJob } from './jobs';
 
 export type EvaluationRecord = typeof evaluations.$inferSelect;
+/** Without what only the page of one evaluation shows. */
+export type ListedRecord = Omit<EvaluationRecord, 'curves' | 'basis'>;
 
 /** Kind of the jobs that evaluate a run; the payload is an {@link EvaluationJob}. */
 export const evaluationJobKind = 'evaluate';
@@ -40,8 +42,8 @@ export async function queueEvaluation(tx: Transaction, { morning, ...evaluation 
   return row;
 }
 
-/** Evaluations of a run, newest first, without their curves. */
-export async function listEvaluations(db: Handle, labId: string, runId: string): Promise<Omit<EvaluationRecord, 'curves'>[]> {
+/** Evaluations of a run, newest first. */
+export async function listEvaluations(db: Handle, labId: string, runId: string): Promise<ListedRecord[]> {
   return db
     .select(listColumns)
     .from(evaluations)
@@ -86,7 +88,7 @@ export async function beginEvaluation(db: Handle, job: EvaluationJob): Promise<E
   return row ?? null;
 }
 
-export type EvaluationEnd = { result: EvaluationResult; curves: FitCurve[]; channel: string | null; software: string } | { error: string };
+export type EvaluationEnd = (EvaluationWork & { channel: string | null; software: string }) | { error: string };
 
 export async function endEvaluation(db: Handle, job: EvaluationJob, end: EvaluationEnd & { finishedAt: number }): Promise<void> {
   const state = 'error' in end ? 'failed' : 'done';
@@ -111,7 +113,7 @@ export async function freezeEvaluation(
 }
 
 /** The evaluation of a run that was frozen last; null where none is. */
-export async function findFrozenEvaluation(db: Handle, labId: string, runId: string): Promise<Omit<EvaluationRecord, 'curves'> | null> {
+export async function findFrozenEvaluation(db: Handle, labId: string, runId: string): Promise<ListedRecord | null> {
   const [found] = await db
     .select(listColumns)
     .from(evaluations)

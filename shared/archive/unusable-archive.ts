@@ -5,6 +5,8 @@ export class UnusableArchive extends Error {
   readonly file: string | null;
   /** Line of the file, counted from 1 with the header, as an editor shows it. */
   readonly row: number | null;
+  /** The reason without the place. */
+  readonly why: string;
 
   constructor(place: { file: string | null; row?: number; column?: string }, why: string) {
     const parts = [
@@ -14,6 +16,7 @@ export class UnusableArchive extends Error {
     ];
     const where = parts.filter((part) => part !== null).join(', ');
     super(where === '' ? why : `${where}: ${why}`);
+    this.why = why;
     this.file = place.file;
     this.row = place.row ?? null;
   }

@@ -1,4 +1,5 @@
 import * as z from 'zod';
+import { gBasisSchema } from '../evaluation/g-basis';
 import { evaluationResultSchema, fitCurveSchema } from '../evaluation/result';
 import { idSchema, instantSchema } from './common';
 import { defineRoute } from './route';
@@ -13,6 +14,8 @@ export const evaluationViewSchema = z.strictObject({
   error: z.string().nullable(),
   result: evaluationResultSchema.nullable(),
   curves: z.array(fitCurveSchema).nullable(),
+  /** What G was computed from, to try values with; null without a G by equilibria. */
+  basis: gBasisSchema.nullable(),
   /** Version of the software that computed the result; null where none was kept. */
   software: z.string().nullable(),
   /** The frozen evaluation that this one computes again. */
@@ -21,7 +24,7 @@ export const evaluationViewSchema = z.strictObject({
   frozen: z.strictObject({ at: instantSchema, by: z.string(), reason: z.string() }).nullable(),
 });
 export type EvaluationView = z.infer<typeof evaluationViewSchema>;
-export type ListedEvaluation = Omit<EvaluationView, 'curves'>;
+export type ListedEvaluation = Omit<EvaluationView, 'curves' | 'basis'>;
 
 export const startEvaluation = defineRoute({
   name: 'startEvaluation',
@@ -42,7 +45,7 @@ export const listEvaluations = defineRoute({
   path: '/labs/:labId/runs/:runId/evaluations',
   access: 'read',
   status: 200,
-  response: z.strictObject({ items: z.array(evaluationViewSchema.omit({ curves: true })) }),
+  response: z.strictObject({ items: z.array(evaluationViewSchema.omit({ curves: true, basis: true })) }),
   problems: ['not-found'],
 });
 export const getEvaluation = defineRoute({

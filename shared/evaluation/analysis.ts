@@ -32,6 +32,8 @@ export interface Analysis {
   /** Null where there is no G. */
   solution: GSolution | null;
   system: GSystem | null;
+  /** The same by the first motion after each swing, with the full step response of a pendulum that the whole dwells tell. */
+  byBeginnings(): Analysis;
 }
 
 /** A dwell that was cut short counts from this many periods on. */
@@ -57,7 +59,9 @@ export function analyse(archive: Archive, plan: EvaluationPlan): Analysis {
   const isTold = found !== null && Math.abs(found.value) > Math.max(2 * found.u, guardedS);
   const offsetS = isTold ? found.value : 0;
   const last = analyseAt(archive, plan, { series, offsetS, judge: true, start: near.start });
-  return { ...last, clockOffset: best(last, offsetS) };
+  const whole = { ...last, clockOffset: best(last, offsetS) };
+  const analysis: Analysis = { ...whole, byBeginnings: () => ({ ...analysis, ...last.begun() }) };
+  return analysis;
 }
 
 /** A coarse offset below this may be none, s; the fine search finds it. */
@@ -74,7 +78,7 @@ function analyseAt(
   archive: Archive,
   plan: EvaluationPlan,
   { series, offsetS, judge, start: found }: { series: ArchivedSeries; offsetS: number; judge: boolean; start?: RingDownStart | null },
-): Omit<Analysis, 'clockOffset'> {
+): Omit<Analysis, 'clockOffset' | 'byBeginnings'> & { begun(): Partial<Analysis> } {
   const scale = scaleOf(series.info, archive.rig);
   const measured = measuredOscillator(archive.rig);
   const windows = dwellWindows(archive.steps, archive.rig);
@@ -88,12 +92,12 @@ function analyseAt(
   refuseShort(usable, start === null ? null : (2 * Math.PI) / start.omega);
   const fitted = usable.filter(({ window }) => window.why === null);
   const whole = iterate({ archive, plan, measured, start, samples: fitted, judge }, rough);
-  if (plan.method !== 'acceleration') return { windows, samplesOf, measured, start, ...whole };
-  // The first motion after each swing, by the full step response of a pendulum that the whole dwells tell.
-  const begun = fitted.map((one) => beginningOf(one, accelerationPeriods * whole.free.period.value));
-  const held: MeasuredOscillator = { omega: omegaOf(whole.free.period), gamma: whole.free.gamma };
-  const early = iterate({ archive, plan, measured: held, start: null, samples: begun, judge }, rough);
-  return { windows, samplesOf, measured: held, start, ...early };
+  const begun = () => {
+    const beginnings = fitted.map((one) => beginningOf(one, accelerationPeriods * whole.free.period.value));
+    const held: MeasuredOscillator = { omega: omegaOf(whole.free.period), gamma: whole.free.gamma };
+    return { measured: held, ...iterate({ archive, plan, measured: held, start: null, samples: beginnings, judge }, rough) };
+  };
+  return { windows, samplesOf, measured, start, ...whole, begun };
 }
 
 /** First guess of a spot scale's zero, m: midway between the mean readings of near and far. */

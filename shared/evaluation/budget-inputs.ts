@@ -24,7 +24,7 @@ export function budgetInputs(rig: RigDocument, use: { stations: readonly string[
   return paths.flatMap((path) => {
     const quantity = quantityAt(rig, path);
     if (quantity === null) return [];
-    return [{ path: path.join('.'), quantity, shifted: (step: number) => withValue(rig, path, quantity.value + step) }];
+    return [{ path: path.join('.'), quantity, shifted: (step: number) => withQuantity(rig, path, { value: quantity.value + step }) }];
   });
 }
 
@@ -37,15 +37,17 @@ function nodeAt(rig: RigDocument, path: readonly string[]): Record<string, unkno
   return typeof node === 'object' && node !== null ? (node as Record<string, unknown>) : null;
 }
 
-function quantityAt(rig: RigDocument, path: readonly string[]): Quantity | null {
+/** The quantity at a path of rig.json; null where there is none. */
+export function quantityAt(rig: RigDocument, path: readonly string[]): Quantity | null {
   const node = nodeAt(rig, path);
   return node !== null && typeof node.value === 'number' ? (node as unknown as Quantity) : null;
 }
 
-function withValue(rig: RigDocument, path: readonly string[], value: number): RigDocument {
+/** A copy of the rig with the quantity at the path changed. */
+export function withQuantity(rig: RigDocument, path: readonly string[], change: { value: number; u?: number }): RigDocument {
   const copy = structuredClone(rig);
   const node = nodeAt(copy, path);
-  if (node !== null) node.value = value;
+  if (node !== null) Object.assign(node, change);
   return copy;
 }
 

@@ -64,12 +64,13 @@ function collectObject(leaves: Leaves, path: string, { value, u, ...others }: Re
 /** What tells a line of a list from its neighbours, so that one line more does not make all that follow differ. */
 function nameOf(item: unknown): string | null {
   if (typeof item !== 'object' || item === null) return null;
-  for (const key of ['seq', 'input', 'channel', 'code', 'tau_s'] as const)
+  for (const key of ['seq', 'input', 'channel', 'method', 'code', 'tau_s'] as const)
     if (key in item) return String((item as Record<string, unknown>)[key]);
   return null;
 }
 
-const placesOfG = /^(G|codata|regressions\[.*\]\.(with|without)\.G)$|^monteCarlo\.(G_mean|G_u|interval95\[\d\])$|\.contribution$/;
+const placesOfG =
+  /^(G|codata|regressions\[.*\]\.(with|without)\.G|methods\[.*\]\.(G|difference))$|^monteCarlo\.(G_mean|G_u|interval95\[\d\])$|\.contribution$/;
 
 function unitOfPath(path: string): string {
   if (placesOfG.test(path)) return UNIT_OF_G;

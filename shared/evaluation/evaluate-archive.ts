@@ -8,10 +8,9 @@ import { analyse, type Analysis } from './analysis';
 import { controlTest } from './empty-control';
 import { regressionsOf, type Regressions } from './environment';
 import type { Known } from './free-oscillator';
-import type { Budget } from './budget';
-import { budgetFor, kappaU, modulationBudget, periodBudget, trialModelOf } from './g-budget';
-import { modulationOutcome } from './modulation-method';
-import { periodOutcome } from './period-method';
+import type { GBasis } from './g-basis';
+import { kappaU } from './g-budget';
+import { answerOf, foundBy, methodsBeside } from './methods';
 import { monteCarlo, type TrialModel } from './monte-carlo';
 import { pretendOf } from './pretend';
 import { evaluationPlan, type EvaluationOptions, type EvaluationPlan } from './registration';
@@ -27,6 +26,8 @@ export interface Evaluation {
   curves: FitCurve[];
   /** For Monte Carlo trials elsewhere; null where there is nothing to draw. */
   trialModel: TrialModel | null;
+  /** For values tried elsewhere; null without a G by equilibria. */
+  basis: GBasis | null;
 }
 
 /**
@@ -35,12 +36,14 @@ export interface Evaluation {
  */
 export function evaluateArchive(archive: Archive, options: EvaluationOptions = {}): Evaluation {
   const plan = evaluationPlan(archive, options);
-  const analysis = analysisOf(archive, plan);
+  const whole = analysisOf(archive, plan);
+  const analysis = plan.method === 'acceleration' ? whole.byBeginnings() : whole;
   const { reversal } = analysis;
-  const { solution, free, budget, trialModel, clockOffset, modulation } = foundBy(archive, plan, analysis);
+  const { solution, free, budget, trialModel, clockOffset, modulation, basis } = foundBy(archive, plan, analysis);
   const byDwells = plan.method === 'equilibrium' || plan.method === 'acceleration';
   const { regressions, warnings } = byDwells ? regressionsOf(archive, plan, { analysis, budget }) : nothing;
-  const u = budget?.u ?? null;
+  const found = solution === null ? null : { bigG: solution.bigG, budget };
+  const { G, relativeU, En } = found === null ? { G: null, relativeU: null, En: null } : answerOf(found);
   const kappa = { value: inertiaKgM2(archive.rig) * free.omega0Squared.value, u: kappaU(archive.rig, free.omega0Squared) };
   const result: EvaluationResult = {
     formatVersion: 1,
@@ -53,17 +56,15 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     kappa_N_m: kappa,
     dwells: dwellResults(analysis),
     reversal_rad: reversal === null ? null : reversalResult(reversal, controlTest(archive.rig, analysis, options.boundRad ?? null)),
-    G: solution === null ? null : { value: solution.bigG, u, degreesOfFreedom: finiteOrNull(budget?.degreesOfFreedom) },
-    relativeU: solution === null || u === null || solution.bigG === 0 ? null : u / Math.abs(solution.bigG),
-    codata: {
-      ...CODATA_2022_G,
-      En: solution === null || u === null ? null : (solution.bigG - CODATA_2022_G.value) / (2 * Math.hypot(u, CODATA_2022_G.u)),
-    },
+    G,
+    relativeU,
+    codata: { ...CODATA_2022_G, En },
     budget: budget?.lines ?? null,
     monteCarlo: trialModel === null ? null : monteCarlo(trialModel, options.trials ?? 0),
     ...(modulation === undefined ? {} : { modulation }),
     ...(hasSwings(archive) || !byDwells ? {} : { pretend: pretendOf(analysis) }),
     ...(regressions.length === 0 ? {} : { regressions }),
+    ...(options.besides !== true || found === null ? {} : { methods: methodsBeside(archive, plan, { whole, ...found }) }),
     warnings: [
       ...archive.warnings,
       ...registrationWarnings(archive, plan),
@@ -71,57 +72,11 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
       ...warnings,
     ],
   };
-  return { result, curves: curvesOf(analysis), trialModel };
+  return { result, curves: curvesOf(analysis), trialModel, basis };
 }
 
 /** Other methods look at no difference of the dwells. */
 const nothing: Regressions = { regressions: [], warnings: [] };
-
-interface Found extends Pick<Analysis, 'solution' | 'free' | 'clockOffset'> {
-  budget: Budget | null;
-  trialModel: TrialModel | null;
-  modulation?: EvaluationResult['modulation'];
-}
-
-function foundBy(archive: Archive, plan: EvaluationPlan, analysis: Analysis): Found {
-  if (plan.method === 'period') return byPeriod(archive, analysis);
-  if (plan.method === 'modulation') return byModulation(archive, plan.channel, analysis);
-  return byEquilibria(archive, analysis);
-}
-
-function byEquilibria({ rig }: Archive, analysis: Analysis): Found {
-  const budget = budgetFor(rig, analysis);
-  return { ...analysis, budget, trialModel: trialModelOf(rig, budget, analysis) };
-}
-
-function byPeriod({ rig }: Archive, analysis: Analysis): Found {
-  const outcome = periodOutcome(rig, analysis);
-  const { solution, period } = outcome;
-  const budget = periodBudget(rig, outcome, analysis.segments);
-  const omega0Squared = { ...analysis.free.omega0Squared, value: solution.omega0Squared };
-  return {
-    solution,
-    clockOffset: analysis.clockOffset,
-    free: { ...analysis.free, period, omega0Squared },
-    budget,
-    trialModel: trialModelOf(rig, budget, { solution }),
-  };
-}
-
-function byModulation(archive: Archive, channel: string, analysis: Analysis): Found {
-  const outcome = modulationOutcome(archive, channel, analysis);
-  const { solution, clockOffset, turns, amplitudeRad } = outcome;
-  const budget = modulationBudget(archive.rig, outcome, analysis);
-  const u = budget?.terms.find(({ line }) => line.input === 'modulation_rad')?.line.u ?? null;
-  return {
-    solution,
-    free: analysis.free,
-    clockOffset,
-    budget,
-    trialModel: trialModelOf(archive.rig, budget, { solution }),
-    modulation: { turns, amplitude_rad: { value: amplitudeRad, u } },
-  };
-}
 
 /** The offset is applied where it is more than twice its uncertainty. */
 function alignmentOf({ clockOffset }: Pick<Analysis, 'clockOffset'>): EvaluationResult['alignment'] {
@@ -135,7 +90,6 @@ function reversalResult({ value, known, count }: Reversal, control: ControlResul
 }
 
 const withU = ({ value, u }: Known) => ({ value, u });
-const finiteOrNull = (value: number | undefined) => (value === undefined || !Number.isFinite(value) ? null : value);
 
 function analysisOf(archive: Archive, plan: EvaluationPlan): Analysis {
   try {

@@ -35,7 +35,7 @@ export interface FitQuestion {
   judge: boolean;
 }
 
-export type FitOutcome = Omit<Analysis, 'windows' | 'samplesOf' | 'measured' | 'clockOffset' | 'start'>;
+export type FitOutcome = Omit<Analysis, 'windows' | 'samplesOf' | 'measured' | 'clockOffset' | 'start' | 'byBeginnings'>;
 
 /** What one round of fitting takes from the round before. */
 interface Round {

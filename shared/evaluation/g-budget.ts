@@ -11,31 +11,59 @@ import { budgetOf, derivative, type Budget, type BudgetTerm, type ObservedTerm }
 import { budgetInputs, derivativeStep } from './budget-inputs';
 import { reread } from './channel-scale';
 import type { Known } from './free-oscillator';
+import { fromStored, type GBasis } from './g-basis';
 import { gSystem } from './g-system';
 import type { TrialModel } from './monte-carlo';
 import type { ModulationOutcome } from './modulation-method';
 import type { PeriodOutcome } from './period-method';
-import { centreOf } from './ring-down-fit';
 import { NoSolutionError, solveG } from './solve-g';
 import type { TrialCore } from './trial-core';
 
-/** The budget of G by the equilibrium method; null without a G or without a scatter to judge the difference by. */
-export function budgetFor(rig: RigDocument, analysis: Analysis): Budget | null {
-  const { solution, reversal, free } = analysis;
-  if (solution === null || reversal === null || reversal.known === null) return null;
-  const stations = [...new Set(reversal.members.map(({ segment }) => analysis.segments[segment]?.window.stationKey ?? null))].filter(
-    (key) => key !== null,
-  );
-  const gOf = gFunction(rig, analysis, solution.bigG);
-  return budgetOf({
+/** What may be supposed otherwise than it was documented or observed; each key left out stays as it was. */
+export interface Supposed {
+  rig?: RigDocument;
+  reversal?: Known;
+  period?: Known;
+  decayTime?: Known;
+}
+
+/** G of the same observations, with its budget: null without a scatter to judge the difference by. */
+export interface SupposedG {
+  bigG: number;
+  budget: Budget | null;
+}
+
+/** The budget of G by the equilibria; null without a scatter to judge the difference by. */
+export const budgetFor = (rig: RigDocument, basis: GBasis): Budget | null => supposedG(rig, basis, {}).budget;
+
+/**
+ * G and its budget by the equilibria, for the rig as documented or with something supposed otherwise.
+ * @throws NoSolutionError where no G gives the observed difference.
+ */
+export function supposedG(documented: RigDocument, basis: GBasis, supposed: Supposed): SupposedG {
+  const rig = supposed.rig ?? documented;
+  const reversal = supposed.reversal ?? (basis.known.reversal === null ? null : fromStored(basis.known.reversal));
+  const period = supposed.period ?? fromStored(basis.known.period);
+  const decayTime = supposed.decayTime ?? (basis.known.decayTime === null ? null : fromStored(basis.known.decayTime));
+  const isOther = supposed.period !== undefined || supposed.decayTime !== undefined;
+  const gOf = gFunction(documented, basis, {
     rig,
-    bigG: solution.bigG,
-    gOf: (supposed) => gOf({ rig: supposed }),
-    stations,
-    lever: analysis.scale.kind === 'spot',
-    observed: observedTerms(gOf, { reversal: reversal.known, period: free.period, decayTime: free.decayTime }),
+    ...(supposed.reversal === undefined ? {} : { reversalRad: supposed.reversal.value }),
+    ...(isOther ? { periodS: period.value, decayTimeS: decayTime?.value ?? Infinity } : {}),
+  });
+  const bigG = gOf({});
+  if (reversal === null) return { bigG, budget: null };
+  const stations = [...new Set(basis.reversal.members.map(({ segment }) => basis.segments[segment]?.window.stationKey ?? null))];
+  const budget = budgetOf({
+    rig,
+    bigG,
+    gOf: (other) => gOf({ rig: other }),
+    stations: stations.filter((key) => key !== null),
+    lever: basis.scale.kind === 'spot',
+    observed: observedTerms(gOf, { reversal, period, decayTime }),
     axisOffset: axisOffsetOf(rig),
   });
+  return { bigG, budget };
 }
 
 /** The budget of G by the time of swing: what the frequencies leave open stands in the line of the period. */
@@ -95,28 +123,31 @@ function observedTerms(gOf: GOf, known: { reversal: Known; period: Known; decayT
   return [...terms, { input: 'decayTime_s', known: decayTime, sensitivity: byDecay }];
 }
 
-/** G as a function of what it is computed from; each key left out stays as it was observed. */
-type GOf = (changes: { rig?: RigDocument; reversalRad?: number; periodS?: number; decayTimeS?: number }) => number;
+/** What G is computed from; each key left out stays as it is supposed anyway. */
+interface Changes {
+  rig?: RigDocument;
+  reversalRad?: number;
+  periodS?: number;
+  decayTimeS?: number;
+}
+type GOf = (changes: Changes) => number;
 
-/** G of the same observations for a rig, a difference or a pendulum supposed otherwise. */
-function gFunction(rig: RigDocument, analysis: Analysis, bigG: number): GOf {
-  const { segments, found, measured, free, reversal, scale } = analysis;
-  const centres = segments.map((_, i) => (found === null ? 0 : centreOf(found, i).value));
-  return ({ rig: supposed = rig, reversalRad, periodS, decayTimeS }) => {
-    const lever = leverOf(supposed);
-    const rereadRad = (reversal?.members ?? []).reduce(
-      (sum, { segment, weight }) => sum + weight * reread(scale, centres[segment] as number, lever),
-      0,
-    );
+/** G of the same observations for a rig, a difference or a pendulum other than those supposed anyway. */
+function gFunction(documented: RigDocument, { scale, segments, found, measured, free, reversal, bigG }: GBasis, anyway: Changes): GOf {
+  return (changes) => {
+    const { rig = documented, reversalRad, periodS, decayTimeS } = { ...anyway, ...changes };
+    const lever = leverOf(rig);
+    const rereadRad = () =>
+      reversal.members.reduce((sum, { segment, weight }) => sum + weight * reread(scale, segments[segment]?.centreRad ?? 0, lever), 0);
     const system = gSystem({
-      rig: supposed,
-      stationsOf: rig,
+      rig,
+      stationsOf: documented,
       segments,
       found,
       measured,
       free,
       reversal,
-      reversalRad: reversalRad ?? (scale.kind === 'angle' ? (reversal?.value ?? 0) : rereadRad),
+      reversalRad: reversalRad ?? (scale.kind === 'angle' ? reversal.value : rereadRad()),
       ...(periodS === undefined || decayTimeS === undefined ? {} : { oscillator: { periodS, decayTimeS } }),
     });
     if (system === null) throw new NoSolutionError('there is no source on the turntable');

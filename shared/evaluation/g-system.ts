@@ -1,22 +1,28 @@
 import { inertiaKgM2 } from '../physics/oscillator';
 import { geometryOf } from '../physics/torque';
 import type { RigDocument } from '../rig/document';
-import type { Segment } from './segment';
-import type { FreeOscillator, MeasuredOscillator } from './free-oscillator';
+import type { DwellWindow } from './dwell-windows';
+import type { FreeOscillator } from './free-oscillator';
 import type { Reversal } from './reversal';
-import type { DwellFit } from './ring-down-fit';
-import type { GSystem } from './solve-g';
+import type { GSystem, MeasuredValues, RingDownFrequencies } from './solve-g';
+
+/** What G needs to know of a fitted window. */
+export interface PlacedSegment {
+  window: Pick<DwellWindow, 'angleDeg' | 'stationKey'>;
+  /** What the sources add to ω² there, rad2/s2. */
+  shift: number;
+}
 
 export interface SystemInput {
   /** The rig as supposed. */
   rig: RigDocument;
   /** The rig as documented: where the supposed one has a station elsewhere, the achieved angles there move along. */
   stationsOf: RigDocument;
-  segments: readonly Segment[];
-  found: DwellFit | null;
-  measured: MeasuredOscillator;
-  free: FreeOscillator;
-  reversal: Reversal | null;
+  segments: readonly PlacedSegment[];
+  found: { ringDown: RingDownFrequencies | null } | null;
+  measured: MeasuredValues;
+  free: Pick<FreeOscillator, 'ringDownShare'>;
+  reversal: Pick<Reversal, 'members' | 'value'> | null;
   /** Near minus far as another lever would read it, rad; absent: as fitted. */
   reversalRad?: number;
   /** The free pendulum as supposed; absent: from the ring-down and the measured values. */
@@ -48,7 +54,7 @@ export function gSystem(input: SystemInput): GSystem | null {
   };
 }
 
-function angleRad({ window }: Segment, { rig, stationsOf }: SystemInput): number {
+function angleRad({ window }: PlacedSegment, { rig, stationsOf }: SystemInput): number {
   const key = window.stationKey;
   const moved = key === null ? 0 : (rig.stations[key]?.value ?? 0) - (stationsOf.stations[key]?.value ?? 0);
   return (((window.angleDeg ?? 0) + moved) * Math.PI) / 180;

@@ -13,6 +13,8 @@ export interface EvaluationOptions {
   boundRad?: number;
   /** Monte Carlo trials, 0 (the default here) for none. */
   trials?: number;
+  /** Whether the other methods are tried too and put beside the one of the result. */
+  besides?: boolean;
 }
 
 /** What is to be done, and how far that is what the protocol registered beforehand. */

@@ -63,9 +63,25 @@ const regressionResultSchema = z.strictObject({
 });
 export type RegressionResult = z.infer<typeof regressionResultSchema>;
 
+const methods = ['equilibrium', 'period', 'acceleration', 'modulation'] as const;
+
+/** What another method makes of the same run. */
+const methodResultSchema = z.strictObject({
+  method: z.enum(methods),
+  G: z.strictObject({ value: z.number(), u: z.number().nullable(), degreesOfFreedom: z.number().nullable() }).nullable(),
+  relativeU: z.number().nullable(),
+  /** Against CODATA 2022. */
+  En: z.number().nullable(),
+  /** Its G minus that of the result; u without what the two share. Null for the method of the result. */
+  difference: z.strictObject({ value: z.number(), u: z.number().nullable() }).nullable(),
+  /** Why it gives no G. */
+  why: z.string().nullable(),
+});
+export type MethodResult = z.infer<typeof methodResultSchema>;
+
 export const evaluationResultSchema = z.strictObject({
   formatVersion: z.literal(1),
-  method: z.enum(['equilibrium', 'period', 'acceleration', 'modulation']),
+  method: z.enum(methods),
   registered: z.boolean().nullable(),
   chain: z.strictObject({ events: z.number().int(), valid: z.literal(true).nullable() }),
   alignment: z.strictObject({ clockOffset_s: withU.nullable(), applied: z.boolean() }).nullable(),
@@ -90,6 +106,8 @@ export const evaluationResultSchema = z.strictObject({
   pretend: pretendResultSchema.nullable().optional(),
   /** Absent where no channel of the surroundings could be compared. */
   regressions: z.array(regressionResultSchema).optional(),
+  /** Absent where the other methods were not tried. */
+  methods: z.array(methodResultSchema).optional(),
   warnings: z.array(z.strictObject({ code: z.string(), message: z.string() })),
 });
 export type EvaluationResult = z.infer<typeof evaluationResultSchema>;

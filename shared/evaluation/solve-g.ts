@@ -1,6 +1,6 @@
 import { equilibriumRad } from '../physics/equilibrium';
 import { torqueGradientPerG, torquePerG, type TorqueGeometry } from '../physics/torque';
-import type { FreeOscillator, MeasuredOscillator } from './free-oscillator';
+import type { FreeOscillator } from './free-oscillator';
 import type { RingDownResult } from './ring-down-fit';
 
 /** Everything that G follows from, as plain numbers. */
@@ -13,14 +13,22 @@ export interface GSystem {
   oscillator: OscillatorSource;
 }
 
+export type RingDownFrequencies = Pick<RingDownResult, 'omega' | 'gamma' | 'omegaByShift' | 'gammaByShift'>;
+
+/** ω (rad/s) and γ (1/s) measured beforehand, where they were. */
+export interface MeasuredValues {
+  omega: { value: number } | null;
+  gamma: { value: number } | null;
+}
+
 /** Where κ/I and γ come from. */
 export type OscillatorSource =
   | { kind: 'given'; omega0Squared: number; gamma: number }
   /** Ring-down and measured values with fixed shares; the ring-down answers to the stiffness of the sources. */
   | {
       kind: 'combined';
-      ringDown: RingDownResult | null;
-      measured: MeasuredOscillator;
+      ringDown: RingDownFrequencies | null;
+      measured: MeasuredValues;
       share: FreeOscillator['ringDownShare'];
       segments: { phiRad: number; shift: number }[];
     };

@@ -75,6 +75,19 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     expect(await hand.reads('chain')).toMatch(/The chain of \d+ events is whole and unchanged/);
   });
 
+  chapter('other methods stand beside, and a value can be tried without changing anything', async () => {
+    expect(await hand.reads('method-acceleration')).toMatch(/agrees at k = 2/);
+    const before = await hand.reads('g-value', '×');
+    await hand.taps('try-a-value');
+    await hand.chooses('trial-input', 'sources.mass');
+    await hand.types('trial-value', '3.2');
+    // Sources of twice the mass: half the G, and the result above stays as it is.
+    const tried = readUncertain(await hand.reads('trial', /G would be/));
+    expect(tried.value / readUncertain(before).value).toBeCloseTo(0.5, 2);
+    expect(await hand.reads('g-value', '×')).toBe(before);
+    await hand.taps('trial-reset');
+  });
+
   chapter('the command gives the same G from the downloaded archive', async () => {
     const [download] = await Promise.all([hand.page.waitForEvent('download'), hand.taps('archive')]);
     expect(download.suggestedFilename()).toMatch(/\.zip$/);

@@ -10,7 +10,7 @@ import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
 import { loadRun } from '../run-view';
 
-const listViewOf = (evaluation: Omit<store.EvaluationRecord, 'curves'>): ListedEvaluation => ({
+const listViewOf = (evaluation: store.ListedRecord): ListedEvaluation => ({
   id: evaluation.id,
   runId: evaluation.runId,
   state: evaluation.state,
@@ -27,7 +27,11 @@ const listViewOf = (evaluation: Omit<store.EvaluationRecord, 'curves'>): ListedE
       : { at: isoOf(evaluation.frozenAt), by: evaluation.frozenBy ?? '', reason: evaluation.frozenReason ?? '' },
 });
 
-const viewOf = (evaluation: store.EvaluationRecord): EvaluationView => ({ ...listViewOf(evaluation), curves: evaluation.curves });
+const viewOf = (evaluation: store.EvaluationRecord): EvaluationView => ({
+  ...listViewOf(evaluation),
+  curves: evaluation.curves,
+  basis: evaluation.basis,
+});
 
 async function loadEvaluation(db: Handle, labId: string, evaluationId: string): Promise<store.EvaluationRecord> {
   const evaluation = await store.findEvaluation(db, labId, evaluationId);

@@ -18,9 +18,9 @@ export async function workEvaluation(services: Services, job: Job): Promise<void
   const run = await findRun(db, evaluation.labId, evaluation.runId);
   if (run === null) throw new Error('the run of an evaluation is gone');
   try {
-    const { result, curves } = await services.tasks.evaluate(await archiveInputOf(services, run), { channel: evaluation.channel });
+    const found = await services.tasks.evaluate(await archiveInputOf(services, run), { channel: evaluation.channel });
     const finishedAt = services.clock.utcMs();
-    await endEvaluation(db, payload, { result, curves, channel: evaluation.channel, software: softwareVersion, finishedAt });
+    await endEvaluation(db, payload, { ...found, channel: evaluation.channel, software: softwareVersion, finishedAt });
   } catch (error) {
     if (error instanceof CutShort || (!isUnusable(error) && job.attempt < job.maxAttempts)) throw error;
     const why = error instanceof Error ? error.message : String(error);

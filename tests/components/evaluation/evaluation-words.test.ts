@@ -1,4 +1,5 @@
-import { enWords, registeredWords, unitOfInput } from '@/components/evaluation/evaluation-words';
+import { agreementOf, changeWords, enWords, regressionWords, registeredWords, unitOfInput } from '@/components/evaluation/evaluation-words';
+import { placeOfWarning } from '@/components/evaluation/warning-places';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { protocol } from '../fixtures/run';
 
@@ -30,4 +31,37 @@ test('a budget line has the unit of the quantity it names', () => {
   expect(unitOfInput('stations.near', demoRigWide)).toBe('deg');
   expect(unitOfInput('reversal_rad', demoRigWide)).toBe('rad');
   expect(unitOfInput('no.such', demoRigWide)).toBe('');
+});
+
+const plain = (text: string) => text.replaceAll('\u202f', ' ');
+
+test('two methods agree while their difference is within twice its u', () => {
+  expect(agreementOf({ value: 4.8e-14, u: 5.1e-14 })).toMatchObject({ agrees: true, words: expect.stringMatching(/En 0.47: agrees at k = 2$/) });
+  const apart = agreementOf({ value: -2e-13, u: 5e-14 });
+  expect(apart.agrees).toBe(false);
+  expect(plain(apart.words)).toBe('differs from the result by −2.00(50) × 10⁻¹³ m³ kg⁻¹ s⁻², En −2.0: disagrees at k = 2');
+  expect(agreementOf({ value: 1e-14, u: null }).agrees).toBeNull();
+});
+
+test('a trial says what it does to G and to its u', () => {
+  expect(plain(changeWords({ value: 6.67e-11, u: 6.67e-13 }, { value: 6.7e-11, u: 3.35e-13 }))).toBe(
+    '+3.000 × 10⁻¹³ m³ kg⁻¹ s⁻² from the result; u 0.500 % of G instead of 1.00 %',
+  );
+});
+
+test('how sure it is that the dwells go with a channel is said with the number of dwells', () => {
+  const reversal = { reversal_rad: { value: 2e-3, u: 1e-6 }, G: null };
+  const one = { channel: 'temperature', unit: 'K', dwells: 12, degreesOfFreedom: 9, without: reversal, with: reversal };
+  const words = (value: number) => regressionWords({ ...one, coefficient: { value, u: 1e-6, unit: 'rad/K' } });
+  // Student's t with 9 degrees of freedom: 2.262 is the 95 % point.
+  expect(plain(words(-2.262e-6))).toBe('pendulum angle over the channel, 12 dwells; chance alone would show as much 5.0 % of the time');
+  expect(plain(words(2e-5))).toContain('under 0.1 % of the time');
+});
+
+test('a warning leads to where it can be looked at', () => {
+  const run = { id: 'r1', rigId: 'g1' };
+  expect(placeOfWarning('clock-offset', run)).toMatchObject({ href: '/runs/r1/data' });
+  expect(placeOfWarning('sign', run)).toMatchObject({ href: '/rigs/g1/stations' });
+  expect(placeOfWarning('not-alternating', run)).toMatchObject({ dwell: true });
+  expect(placeOfWarning('no-hashes', run)).toBeNull();
 });

@@ -61,6 +61,36 @@ test.each<[string, NightPlan]>([
   expect(relativeDifference(result.G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
 });
 
+describe('the methods beside each other', () => {
+  const normal = normalDeviates(17);
+  const reading = (angle: number) => angle + 1e-6 * normal();
+
+  test('agree on a night of near, far and across, with a u that leaves out what they share', () => {
+    const rig = withRig(unmeasured(), (r) => void Object.assign(r.sources.mass as object, { u: 0.016 }));
+    const anglesDeg = [near, -near, 90, near, -near, 90, near, -near, 90];
+    const { result } = evaluateNight({ rig, anglesDeg, dwellS: 1260, reading }, { besides: true });
+    const methods = result.methods ?? [];
+    expect(methods.map(({ method }) => method)).toEqual(['equilibrium', 'period', 'acceleration']);
+    expect(methods[0]).toMatchObject({ G: result.G, relativeU: result.relativeU, difference: null, why: null });
+    for (const { G, difference, why } of methods.slice(1)) {
+      expect(why).toBeNull();
+      expect(difference?.value).toBeCloseTo((G?.value ?? NaN) - (result.G?.value ?? NaN), 25);
+      expect(Math.abs(difference?.value ?? NaN)).toBeLessThan(4 * (difference?.u ?? NaN));
+    }
+    // One per cent of the mass moves both alike: it is in each u, and not in that of their difference.
+    const acceleration = methods[2];
+    expect(acceleration?.relativeU).toBeGreaterThan(0.0099);
+    expect((acceleration?.difference?.u ?? NaN) / trueG).toBeLessThan(0.005);
+  });
+
+  test('of which one gives nothing say why', () => {
+    const plan = { rig: unmeasured(), anglesDeg: alternatingAngles(4, near, -near), dwellS: 900, reading };
+    const period = evaluateNight(plan, { besides: true }).result.methods?.[1];
+    expect(period).toMatchObject({ method: 'period', G: null, why: expect.stringContaining('two angles') });
+    expect(evaluateNight(plan, {}).result.methods).toBeUndefined();
+  });
+});
+
 test('generalised least squares against a wandering zero: the cost of 48 dwells (physics.md D4)', () => {
   const series = Array.from({ length: 48 }, (_, k) => ({ timeS: 1000 * k, side: k % 2 === 0 ? (1 as const) : (-1 as const), value: 0 }));
   const cost = (ratio: number) => (48 * walkFit(series, ratio).unitVariance) / 4;
