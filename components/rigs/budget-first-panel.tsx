@@ -18,8 +18,8 @@ export function BudgetFirstPanel({ document }: { document: RigDocument }) {
     <View className="gap-3 rounded-panel border border-line p-4" testID="rig-budget">
       <Body strong>Which measurement would help most</Body>
       <Body>
-        The stated u of this apparatus alone leave u(G) at {formatPercent(relativeU)} of G. Nights make the
-        period and the decay time better known; all else takes a better measurement.
+        The stated u of this apparatus alone leave u(G) at {formatPercent(relativeU)} of G. Nights make the period and the decay time better
+        known; all else takes a better measurement.
       </Body>
       <View role="list" className="gap-3">
         {measurements.slice(0, shown).map((one, index) => (

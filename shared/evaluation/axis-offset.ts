@@ -1,4 +1,6 @@
-import type { TorqueGeometry } from '../physics/torque';
+import { RAD_PER_DEG } from '../physics/constants';
+import { geometryOf, type TorqueGeometry } from '../physics/torque';
+import type { RigDocument } from '../rig/document';
 
 /**
  * A turntable axis that stands beside the fibre moves one source closer and the other away. To first order in the offset
@@ -37,7 +39,7 @@ function pointsOf({ armM, ballMassKg, beamMassKg, beamHalfLengthM }: TorqueGeome
  * Root mean square, over all directions of the offset, of the relative change of near-minus-far torque for an axis
  * `offsetM` beside the fibre.
  */
-export function relativeTorqueChange(geometry: TorqueGeometry, stations: { nearRad: number; farRad: number }, offsetM: number): number {
+function relativeTorqueChange(geometry: TorqueGeometry, stations: { nearRad: number; farRad: number }, offsetM: number): number {
   const differenceAt = (axis: { x: number; y: number }) =>
     torqueBeside(geometry, stations.nearRad, axis) - torqueBeside(geometry, stations.farRad, axis);
   const centred = differenceAt({ x: 0, y: 0 });
@@ -48,4 +50,18 @@ export function relativeTorqueChange(geometry: TorqueGeometry, stations: { nearR
     squares += change * change;
   }
   return Math.sqrt(squares / directions);
+}
+
+/** The rig's stated offset with what it does to G; null where none is stated, or near or far is not. */
+export function axisOffsetOf(rig: RigDocument): { value: number; u: number; relative: number } | null {
+  const offset = rig.axis?.offset;
+  const near = rig.stations.near?.value;
+  const far = rig.stations.far?.value;
+  if (offset === undefined || near === undefined || far === undefined) return null;
+  const stations = { nearRad: near * RAD_PER_DEG, farRad: far * RAD_PER_DEG };
+  return {
+    value: offset.value,
+    u: offset.u,
+    relative: relativeTorqueChange(geometryOf(rig), stations, Math.hypot(offset.value, offset.u)),
+  };
 }

@@ -2,11 +2,10 @@ import { RAD_PER_DEG } from '../physics/constants';
 import { equilibriumRad } from '../physics/equilibrium';
 import { leverOf } from '../physics/lever';
 import { inertiaKgM2 } from '../physics/oscillator';
-import { geometryOf } from '../physics/torque';
 import type { RigDocument } from '../rig/document';
 import type { Law } from '../statistics/draws';
 import type { Analysis } from './analysis';
-import { relativeTorqueChange } from './axis-offset';
+import { axisOffsetOf } from './axis-offset';
 import { budgetOf, derivative, type Budget, type BudgetTerm, type ObservedTerm } from './budget';
 import { budgetInputs, derivativeStep } from './budget-inputs';
 import { reread } from './channel-scale';
@@ -152,19 +151,6 @@ function gFunction(documented: RigDocument, { scale, segments, found, measured, 
     });
     if (system === null) throw new NoSolutionError('there is no source on the turntable');
     return solveG(system, bigG).bigG;
-  };
-}
-
-function axisOffsetOf(rig: RigDocument): { value: number; u: number; relative: number } | null {
-  const offset = rig.axis?.offset;
-  const near = rig.stations.near?.value;
-  const far = rig.stations.far?.value;
-  if (offset === undefined || near === undefined || far === undefined) return null;
-  const stations = { nearRad: near * RAD_PER_DEG, farRad: far * RAD_PER_DEG };
-  return {
-    value: offset.value,
-    u: offset.u,
-    relative: relativeTorqueChange(geometryOf(rig), stations, Math.hypot(offset.value, offset.u)),
   };
 }
 

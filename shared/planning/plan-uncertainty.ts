@@ -1,4 +1,4 @@
-import { relativeTorqueChange } from '../evaluation/axis-offset';
+import { axisOffsetOf } from '../evaluation/axis-offset';
 import { budgetOf, derivative, type BudgetTerm, type ObservedTerm } from '../evaluation/budget';
 import { CODATA_2022_G, RAD_PER_DEG } from '../physics/constants';
 import { equilibriumRad } from '../physics/equilibrium';
@@ -77,7 +77,6 @@ export function documentedBudget(
   });
   const slopeBy = (key: 'signal' | 'periodS' | 'decayTimeS', value: number) =>
     derivative((step) => gOf(rig, { [key]: value + step }), 1e-4 * Math.abs(value));
-  const offset = rig.axis?.offset;
   const budget = budgetOf({
     rig,
     bigG,
@@ -89,17 +88,7 @@ export function documentedBudget(
       term('period_s', periodS, { u: known.period, slope: slopeBy('periodS', periodS) }),
       term('decayTime_s', decayTimeS, { u: known.decay, slope: slopeBy('decayTimeS', decayTimeS) }),
     ],
-    axisOffset:
-      offset === undefined
-        ? null
-        : {
-            ...offset,
-            relative: relativeTorqueChange(
-              geometry,
-              { nearRad: near.value * RAD_PER_DEG, farRad: far.value * RAD_PER_DEG },
-              Math.hypot(offset.value, offset.u),
-            ),
-          },
+    axisOffset: axisOffsetOf(rig),
   });
   const lever = rig.lever === undefined ? 0 : rig.lever.distance.u / rig.lever.distance.value;
   const parts = grouped(budget.terms).map(({ source, inputs, signed, halved }) => ({

@@ -36,7 +36,10 @@ test('a budget line has the unit of the quantity it names', () => {
 const plain = (text: string) => text.replaceAll('\u202f', ' ');
 
 test('two methods agree while their difference is within twice its u', () => {
-  expect(agreementOf({ value: 4.8e-14, u: 5.1e-14 })).toMatchObject({ agrees: true, words: expect.stringMatching(/En 0.47: agrees at k = 2$/) });
+  expect(agreementOf({ value: 4.8e-14, u: 5.1e-14 })).toMatchObject({
+    agrees: true,
+    words: expect.stringMatching(/En 0.47: agrees at k = 2$/),
+  });
   const apart = agreementOf({ value: -2e-13, u: 5e-14 });
   expect(apart.agrees).toBe(false);
   expect(plain(apart.words)).toBe('differs from the result by −2.00(50) × 10⁻¹³ m³ kg⁻¹ s⁻², En −2.0: disagrees at k = 2');
