@@ -1,7 +1,7 @@
 import type { Logger } from 'pino';
 import type { ArmRequest } from '../engine/arming';
 import type { ArmKeeper, EndedArm, StandingArm } from '../interfaces/arm-keeper';
-import { type Clock, wallUtcMs } from '../interfaces/clock';
+import type { Clock } from '../interfaces/clock';
 import { armRig, currentArm, endArm, newestArm } from '../store/arms';
 import { appendAudit } from '../store/audit';
 import type { Connection } from '../store/database';
@@ -39,11 +39,9 @@ export class MemoryArmKeeper implements ArmKeeper {
     this.ended.set(rig.rigId, { name, why: endedWhy ?? '', atUtcMs: endedAt });
   }
 
-  /** By the wall clock and by the time that runs keep to: no arm outlasts either. */
   armOf(rigId: string): StandingArm | null {
-    const { clock } = this.parts;
     const arm = this.arms.get(rigId);
-    return arm !== undefined && arm.untilUtcMs > Math.max(clock.utcMs(), wallUtcMs(clock)) ? arm : null;
+    return arm !== undefined && arm.untilUtcMs > this.parts.clock.utcMs() ? arm : null;
   }
 
   endedOf(rigId: string): EndedArm | null {

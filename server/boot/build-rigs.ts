@@ -1,4 +1,4 @@
-import { hostname } from 'node:os';
+import { hostname, uptime } from 'node:os';
 import { join } from 'node:path';
 import type { Logger } from 'pino';
 import type { Arming } from '../engine/arming';
@@ -9,7 +9,9 @@ import { MotorSoak } from '../engine/motor-soak';
 import type { NoticeTopic } from '../engine/run-context';
 import { type QuarantinedRun, RigSupervisor, type SupervisorParts } from '../engine/rig-supervisor';
 import { DATABASE_GRACE_MS } from '../engine/run-saver';
+import { SteadyClock } from '../engine/steady-clock';
 import { sha256Hex } from '../evaluation/sha256';
+import type { Clock } from '../interfaces/clock';
 import type { RigStation } from '../interfaces/rig-stations';
 import type { SampleReader } from '../interfaces/sample-reader';
 import type { SampleStore } from '../interfaces/sample-store';
@@ -23,7 +25,6 @@ import { buildStanding, engineItself } from './build-standing';
 import { FileJournals } from './file-journal';
 import { LeaseKeeper, type RigKey } from './lease-keeper';
 import type { MemoryLockKeeper } from './lock-keeper';
-import { RealClock } from './real-clock';
 import { RigApparatus } from './rig-apparatus';
 import { ServerRigStations } from './rig-stations';
 
@@ -72,6 +73,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     supervisor: () => supervisor,
     guided: (): GuidedMoves => guided,
   });
+  const clockOf = steadyClocks(clock, (rigId) => supervisor.drives(rigId));
   const leases = new LeaseKeeper({
     ...{ database, clock, log, onTaken },
     holder: wiring.holder,
@@ -85,7 +87,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
   });
   const [apparatus, soak] = [new RigApparatus(parts, log), new MotorSoak()];
   const stations = new ServerRigStations({
-    ...{ database, samples, clock, log },
+    ...{ database, samples, clock, clockOf, log },
     paceMs: overrides.paceMs ?? 0,
     epochOf: (rig) => leases.epochOf(rig),
     raiseEpoch: (rig, above) => leases.raise(rig, above),
@@ -96,7 +98,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
   const supervisor: RigSupervisor = new RigSupervisor({
     store: createRunStore(database.db, wiring.holder),
     journals: overrides.journals ?? new FileJournals(join(parts.config.stateDir, 'journal')),
-    ...{ clock, sha256: sha256Hex, serverName, linkOf },
+    ...{ clock, clockOf, sha256: sha256Hex, serverName, linkOf },
     armOf: (rigId) => arms.armOf(rigId),
     whyDisarmed: (rigId) => arms.endedOf(rigId)?.why ?? '',
     lockedBy: (rigId) => locks.lockedBy(rigId),
@@ -111,7 +113,6 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     onError: (error, { runId, rigId }) => log.error({ err: error, runId, rigId }, 'a run went wrong'),
   });
 
-  if (clock instanceof RealClock) clock.keepSteadyWhile(() => supervisor.drives());
   const guided = buildGuided({ clock, linkOf, arms, locks, onLine, supervisor });
   const heed = heedLinks({ arms, arming, guided, soak }, wiring, () => clock.utcMs());
 
@@ -123,6 +124,18 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
   }
 
   return { arms, arming, locks, leases, stations, supervisor, guided, apparatus, soak };
+}
+
+/** The time of each rig: one that its run keeps to. */
+function steadyClocks(clock: Clock, drives: (rigId: string) => boolean): (rigId: string) => Clock {
+  const clocks = new Map<string, Clock>();
+  // Linux counts sleep in the one and not in the other (clock_gettime(2): CLOCK_BOOTTIME, CLOCK_MONOTONIC).
+  const slept = () => 1000 * uptime() - clock.monotonicMs();
+  return (rigId) => {
+    const known = clocks.get(rigId) ?? new SteadyClock(clock, () => drives(rigId), slept);
+    clocks.set(rigId, known);
+    return known;
+  };
 }
 
 function buildGuided(parts: {

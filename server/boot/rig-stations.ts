@@ -21,6 +21,8 @@ export interface StationsParts {
   database: Connection;
   samples: SampleStore;
   clock: Clock;
+  /** The time that the run of a rig keeps to, in which its line tells instants. */
+  clockOf(rigId: string): Clock;
   log: Logger;
   /** Samples of a channel are stored at most this often, ms; 0: as they come. */
   paceMs: number;
@@ -64,7 +66,7 @@ export class ServerRigStations implements RigStations {
     const outside = factoryOf(rig.link, clock);
     const apparatus = outside === null ? this.parts.apparatusOf(rig) : null;
     const factory = outside ?? (apparatus as SimulatedApparatus).factory;
-    const link = createLink({ factory, clock, rig: motion, epoch });
+    const link = createLink({ factory, clock: this.parts.clockOf(rig.id), rig: motion, epoch });
     const channel = apparatus === null ? null : await this.simulatedChannel(rig);
     const virtual = apparatus?.inputs ?? null;
     const station: OpenStation = { labId: rig.labId, rigId: rig.id, settings: rig.link, link, channel, virtual, end: () => undefined };

@@ -3,7 +3,7 @@ import { lookAtWait, type WaitFinding } from '@/shared/conditions/wait-condition
 import type { RunStart } from '@/shared/archive/run-records';
 import type { Step } from '@/shared/protocol/document';
 import { waitOf } from '@/shared/protocol/wait';
-import type { Instant } from '../interfaces/clock';
+import { type Clock, HOST_STEP_MS, type Instant, wallUtcMs } from '../interfaces/clock';
 import type { SampleReader } from '../interfaces/sample-reader';
 import type { RunEvent } from './run-context';
 
@@ -16,6 +16,19 @@ export type Finding =
   | { kind: 'dwell'; facts: DwellFacts }
   /** `unsimulated`: a rehearsal has no such channel, and the condition counts as met. */
   | { kind: 'wait'; seq: number; found: WaitFinding; unsimulated: boolean };
+
+/** Samples are stamped by wall clocks: where that of the server was set, the run sees them in the time that it keeps to. */
+function inTimeOf(clock: Clock, reader: SampleReader): SampleReader {
+  const aheadMs = wallUtcMs(clock) - clock.utcMs();
+  if (Math.abs(aheadMs) < HOST_STEP_MS) return reader;
+  return {
+    deflection: (wanted) => reader.deflection(wanted),
+    read: (channel, { fromUtcMs, toUtcMs }) => {
+      const series = reader.read(channel, { fromUtcMs: fromUtcMs + aheadMs, toUtcMs: toUtcMs + aheadMs });
+      return series === null ? null : { ...series, utcMs: series.utcMs.map((utcMs) => utcMs - aheadMs) };
+    },
+  };
+}
 
 /** Answers a look from the samples that are there at `nowUtcMs`; null where a dwell cannot be judged because no deflection ever came. */
 function lookUp(start: RunStart, look: Look, { reader, nowUtcMs }: { reader: SampleReader; nowUtcMs: number }): Finding | null {
@@ -58,8 +71,14 @@ function waitFinding(start: RunStart, look: Look & { kind: 'wait' }, { reader, n
   return { kind: 'wait', seq, found: unsimulated ? { ...found, met: true } : found, unsimulated };
 }
 
+interface Seer {
+  start: RunStart;
+  clock: Clock;
+  samples?: SampleReader;
+}
+
 /** The event that answers a look. */
-export function lookedInto({ start, samples }: { start: RunStart; samples?: SampleReader }, look: Look, at: Instant): RunEvent {
-  const finding = samples === undefined ? null : lookUp(start, look, { reader: samples, nowUtcMs: at.utcMs });
+export function lookedInto({ start, clock, samples }: Seer, look: Look, at: Instant): RunEvent {
+  const finding = samples === undefined ? null : lookUp(start, look, { reader: inTimeOf(clock, samples), nowUtcMs: at.utcMs });
   return { type: 'looked', at, finding };
 }

@@ -19,6 +19,8 @@ export interface SupervisorParts {
   store: RunStore;
   journals: RunJournals;
   clock: Clock;
+  /** The time that the run of a rig keeps to, which its link tells instants in too; without it `clock`. */
+  clockOf?(rigId: string): Clock;
   sha256: Sha256;
   /** The open link of a rig; null while it has none. The same object for as long as a run may use it. */
   linkOf(rigId: string): TurntableLink | null;
@@ -136,9 +138,9 @@ export class RigSupervisor {
     return this.byRig.get(rigId) ?? null;
   }
 
-  /** Whether any run goes on here. */
-  drives(): boolean {
-    return [...this.byRig.values()].some((driver) => !driver.isOver());
+  /** Whether a run of the rig goes on here. */
+  drives(rigId: string): boolean {
+    return this.byRig.get(rigId)?.isOver() === false;
   }
 
   driverOf(runId: string): RunDriver | null {
@@ -282,7 +284,7 @@ export class RigSupervisor {
   }
 
   private drive(start: RunStart, stored: StoredRun | null, link: TurntableLink): RunDriver {
-    const { store, journals, clock, sha256, armOf, whyDisarmed, lockedBy, samplesOf, perform, onError, isPassing, serverName } = this.parts;
+    const { store, journals, sha256, armOf, whyDisarmed, lockedBy, samplesOf, perform, onError, isPassing, serverName } = this.parts;
     const driver = new RunDriver({
       ...(serverName === undefined ? {} : { serverName }),
       ...(samplesOf === undefined ? {} : { samples: samplesOf(start.rigId) }),
@@ -290,7 +292,7 @@ export class RigSupervisor {
       stored,
       store,
       journal: journals.of(start),
-      clock,
+      clock: this.parts.clockOf?.(start.rigId) ?? this.parts.clock,
       sha256,
       link,
       armNow: () => armOf(start.rigId),

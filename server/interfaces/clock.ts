@@ -5,9 +5,9 @@
 export interface Clock {
   /** Milliseconds since an arbitrary origin, never stepping. */
   monotonicMs(): number;
-  /** Milliseconds since 1970-01-01T00:00:00Z, with fraction; while a run goes on it does not follow a wall clock that is set. */
+  /** Milliseconds since 1970-01-01T00:00:00Z, with fraction. */
   utcMs(): number;
-  /** By the wall clock, which may be set; absent where that is `utcMs`. */
+  /** By the wall clock, where `utcMs` does not follow one that is set; absent where it does. */
   wallUtcMs?(): number;
   /** Runs `task` once, `delayMs` of monotonic time from now (0 or less: as soon as possible, never synchronously). */
   after(delayMs: number, task: () => void): Cancel;

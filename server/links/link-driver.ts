@@ -1,7 +1,7 @@
 import { decodeLine, type HiBody, type Order } from '@/firmware-protocol/codec';
 import type { RigMotion } from '@/shared/rig/document';
 import type { ByteLineFactory } from '../interfaces/byte-line';
-import type { Cancel, Clock } from '../interfaces/clock';
+import { type Cancel, type Clock, wallUtcMs } from '../interfaces/clock';
 import type {
   ControllerLimits,
   ControllerState,
@@ -233,7 +233,7 @@ class LinkDriver implements TurntableLink {
     const item = decodeLine(line);
     if (item.kind === 'reply') {
       this.here.answered = true;
-      this.lastReply = { monotonicMs: this.options.clock.monotonicMs(), utcMs: this.options.clock.utcMs() };
+      this.lastReply = { monotonicMs: this.options.clock.monotonicMs(), utcMs: wallUtcMs(this.options.clock) };
       this.talk.hearReply(item, line.length + 1);
     } else if (item.kind === 'event') this.talk.hearEvent(item);
     else if (item.kind !== 'blank') {

@@ -6,7 +6,7 @@ import { MemoryJournals } from '@/server/engine/memory-journal';
 import { RigSupervisor } from '@/server/engine/rig-supervisor';
 import type { Arm } from '@/server/engine/run-context';
 import type { RunDriver } from '@/server/engine/run-driver';
-import { SteadyUtc } from '@/server/engine/steady-utc';
+import { SteadyClock } from '@/server/engine/steady-clock';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import type { Clock } from '@/server/interfaces/clock';
@@ -76,20 +76,9 @@ export class SimulatedStore implements RunStore {
 class SteppingClock implements Clock {
   stepMs = 0;
   ratePpm = 0;
-  private steady: SteadyUtc;
-  constructor(
-    private readonly clock: VirtualClock,
-    private readonly goesOn: () => boolean,
-  ) {
-    this.steady = new SteadyUtc(goesOn);
-  }
+  constructor(private readonly clock: VirtualClock) {}
   monotonicMs = () => this.clock.monotonicMs();
-  wallUtcMs = () => this.clock.utcMs() + this.stepMs + this.ratePpm * 1e-6 * this.monotonicMs();
-  utcMs = () => this.monotonicMs() + this.steady.aheadMs(this.wallUtcMs() - this.monotonicMs());
-  /** Another process looks at the clocks for the first time. */
-  forget(): void {
-    this.steady = new SteadyUtc(this.goesOn);
-  }
+  utcMs = () => this.clock.utcMs() + this.stepMs + this.ratePpm * 1e-6 * this.monotonicMs();
   after = (delayMs: number, task: () => void) => this.clock.after(delayMs, task);
 }
 
@@ -134,7 +123,7 @@ export class World {
     { seed, startUtcMs }: { seed: number; startUtcMs: number },
   ) {
     this.clock = new VirtualClock(startUtcMs, settle);
-    this.machineClock = new SteppingClock(this.clock, () => this.supervisor?.drives() ?? false);
+    this.machineClock = new SteppingClock(this.clock);
     this.store = new SimulatedStore(start);
     this.room = new Room(this.machineClock);
     this.arm = start.arm;
@@ -265,10 +254,10 @@ export class World {
 
   private openServer(): RigSupervisor {
     this.epoch += 1;
-    this.machineClock.forget();
+    const clock = new SteadyClock(this.machineClock, () => this.supervisor?.drives(this.start.rigId) ?? false);
     const link = createLink({
       factory: this.controller.factory,
-      clock: this.machineClock,
+      clock,
       rig: motionOf(this.start.rig),
       epoch: this.epoch,
     });
@@ -282,7 +271,7 @@ export class World {
     };
     link.open();
     this.supervisor = new RigSupervisor({
-      ...{ store: this.store, journals: this.journals, clock: this.machineClock, sha256: sha256Hex },
+      ...{ store: this.store, journals: this.journals, clock, sha256: sha256Hex },
       isPassing,
       linkOf: () => link,
       armOf: () => this.arm,
