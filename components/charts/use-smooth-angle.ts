@@ -1,7 +1,7 @@
 import { useEffect, useRef, useState } from 'react';
 import { deviceNowMs } from '@/components/api';
 
-const reducedMotion = (): boolean =>
+export const reducedMotion = (): boolean =>
   typeof window !== 'undefined' && (window.matchMedia?.('(prefers-reduced-motion: reduce)').matches ?? false);
 
 /**

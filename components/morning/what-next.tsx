@@ -20,6 +20,7 @@ export function WorstMoments({ worst, runId, timeZone }: Pick<MorningSheet, 'wor
               <Label>{words}</Label>
             </View>
             <TextLink href={`/runs/${runId}/log?row=${seq}`} label={`Row ${seq}`} />
+            <TextLink href={`/runs/${runId}/replay?at=${at}`} label="Replay" />
           </View>
         ))}
       </Panel>

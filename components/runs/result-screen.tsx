@@ -193,6 +193,7 @@ function Links({ runId }: { runId: string }) {
     <View className="flex-row flex-wrap gap-1" role="navigation" aria-label="More of this run">
       <TextLink href={`/runs/${runId}/evaluation`} label="Evaluation" />
       <TextLink href={`/runs/${runId}/log`} label="Step log" />
+      <TextLink href={`/runs/${runId}/replay`} label="Replay" />
       <TextLink href={`/runs/${runId}/data`} label="Deflection data" />
     </View>
   );

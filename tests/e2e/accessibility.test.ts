@@ -79,6 +79,7 @@ function places(): Place[] {
     { name: 'runs', path: '/runs', arrives: 'runs-screen', first: async (hand) => void (await hand.reads('run-row')) },
     { name: 'run', path: `/runs/${runningId}`, arrives: 'run-screen', first: async (hand) => void (await hand.reads('link-chip', 'live')) },
     { name: 'result', path: `/runs/${finishedId}`, arrives: 'result-screen', first: async (hand) => void (await hand.reads('g-panel')) },
+    { name: 'replay', path: `/runs/${finishedId}/replay`, arrives: 'replay-screen' },
     { name: 'step-log', path: `/runs/${finishedId}/log`, arrives: 'step-log', first: opened('events-3', 'chain-head') },
     {
       name: 'data',

@@ -116,4 +116,37 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
       })),
     );
   });
+
+  chapter('the replay shows table, deflection and step of any moment, by thumb, by keys and by its address', async () => {
+    await hand.goes(`/runs/${runId}/replay`, 'replay-screen');
+    const slider = hand.page.getByTestId('time-slider');
+    await slider.focus();
+    await hand.page.keyboard.press('End');
+    const end = await hand.reads('replay-clock');
+    await hand.page.keyboard.press('Home');
+    const [begin, step] = [await hand.reads('replay-clock'), await hand.reads('replay-step')];
+    expect(step).toBe('Home: finding the edge');
+    await hand.page.keyboard.press('PageUp');
+    await hand.reads('replay-step', /^Swing to near/);
+    await hand.taps('replay-next');
+    await hand.reads('replay-step', /^Swing to far/);
+    await hand.taps('replay-next');
+    await hand.reads('replay-step', /^Dwell, far side/);
+    const box = await slider.boundingBox();
+    if (box === null) throw new Error('the slider is on the page');
+    await hand.page.mouse.click(box.x + box.width / 2, box.y + box.height / 2);
+    const middle = await hand.reads('replay-clock');
+    expect([begin, middle, end]).toEqual([begin, middle, end].sort());
+    await hand.shoots('replay');
+    await hand.taps('replay-link');
+    await hand.page.waitForURL(/replay\?at=/);
+    await hand.goes(hand.page.url().replace(/^https?:\/\/[^/]+/, ''), 'replay-screen');
+    await hand.reads('replay-clock', middle);
+    // Motion is reduced in this browser: from step to step until the end.
+    await slider.focus();
+    await hand.page.keyboard.press('End');
+    await hand.taps('replay-previous');
+    await hand.taps('replay-play');
+    await hand.reads('replay-clock', end);
+  });
 });

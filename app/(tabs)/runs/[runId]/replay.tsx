@@ -1,0 +1,5 @@
+import { ReplayScreen } from '@/components/shell/lazy-screens';
+
+export default function Replay() {
+  return <ReplayScreen />;
+}

@@ -1,0 +1,48 @@
+import { valueAt, type Series } from '@/components/charts/curve';
+import type { StepRowView } from '@/shared/contracts/runs';
+import { trapezoid } from '@/shared/physics/trapezoid';
+import type { RigDocument } from '@/shared/rig/document';
+
+/** What a run was doing at an instant. Pure. */
+
+export interface Moment {
+  row: StepRowView | null;
+  /** Turntable, deg; null before its angle is known. */
+  angleDeg: number | null;
+  /** Measured pendulum angle, rad; null in a gap. */
+  rad: number | null;
+}
+
+/** A gap in the samples longer than this is shown as one, ms. */
+const longestStrideMs = 60_000;
+
+export interface NightRecord {
+  rows: readonly StepRowView[];
+  /** x in UTC ms, y in rad. */
+  measured: Series | null;
+  rig: RigDocument;
+}
+
+export function momentAt({ rows, measured, rig }: NightRecord, utcMs: number): Moment {
+  const row = rows.findLast((one) => one.startUtcMs <= utcMs) ?? null;
+  return {
+    row,
+    angleDeg: row === null ? null : angleAt(row, rig, utcMs),
+    rad: measured === null ? null : valueAt(measured, utcMs, longestStrideMs),
+  };
+}
+
+/** Between the angles at both ends of a motion: speeding up and slowing down as the rig does, stretched to the time that it took. */
+function angleAt({ angleStartDeg, angleEndDeg, startUtcMs, endUtcMs }: StepRowView, rig: RigDocument, utcMs: number): number | null {
+  if (angleStartDeg === null || angleEndDeg === null || endUtcMs === null) return angleStartDeg ?? angleEndDeg;
+  if (utcMs >= endUtcMs || angleStartDeg === angleEndDeg || rig.motion === undefined) return angleEndDeg;
+  const { maxSpeed_deg_s: speedDegS, maxAcceleration_deg_s2: accelerationDegS2 } = rig.motion;
+  const move = trapezoid({ fromDeg: angleStartDeg, toDeg: angleEndDeg, speedDegS, accelerationDegS2 });
+  return move.angleDegAt(((utcMs - startUtcMs) / (endUtcMs - startUtcMs)) * move.durationS);
+}
+
+/** Where the next or the previous step begins; the ends of the run where there is none. */
+export function neighbourStart(rows: readonly StepRowView[], utcMs: number, by: 1 | -1): number | null {
+  const starts = rows.map(({ startUtcMs }) => startUtcMs);
+  return (by === 1 ? starts.find((start) => start > utcMs + 1) : starts.findLast((start) => start < utcMs - 1)) ?? null;
+}
