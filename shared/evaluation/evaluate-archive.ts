@@ -68,7 +68,7 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     warnings: [
       ...archive.warnings,
       ...registrationWarnings(archive, plan),
-      ...warningsOf(archive, { ...analysis, clockOffset }),
+      ...warningsOf(archive, { ...analysis, solution, clockOffset }, plan.method),
       ...warnings,
     ],
   };

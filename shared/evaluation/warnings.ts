@@ -17,9 +17,21 @@ const noReversal: ArchiveWarning = {
 };
 
 /** What a reader of the result must know of how it came about. */
-export function warningsOf(archive: Archive, { reversal, free, solution, clockOffset }: Analysis): ArchiveWarning[] {
+export function warningsOf(archive: Archive, analysis: Analysis, method: EvaluationPlan['method']): ArchiveWarning[] {
+  const { free, solution, clockOffset } = analysis;
   const warnings = [...oscillatorWarnings(free), ...clockWarnings(clockOffset)];
-  if (reversal === null) return hasSwings(archive) ? [...warnings, noReversal] : warnings;
+  if (method === 'modulation' && solution !== null && solution.bigG < 0)
+    warnings.push({
+      code: 'sign',
+      message: 'The swing with the turntable has the wrong sign, so G came out negative: look at lever.sense.',
+    });
+  return method === 'period' || method === 'modulation' ? warnings : [...warnings, ...reversalWarnings(archive, analysis)];
+}
+
+/** For the methods that look at near minus far. */
+function reversalWarnings(archive: Archive, { reversal, solution }: Analysis): ArchiveWarning[] {
+  const warnings: ArchiveWarning[] = [];
+  if (reversal === null) return hasSwings(archive) ? [noReversal] : [];
   const dwells = reversal.members.length;
   if (dwells < enoughDwells) {
     const consequence =

@@ -122,6 +122,16 @@ test('turning back is not evaluated: what it shows does not count', () => {
   expect(relativeDifference(result.G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
 });
 
+test('a reversed scale is told by the sign of G, and that there are no near and far dwells is nothing to warn of', () => {
+  const swung: NightPlan = { ...base, anglesDeg: [60, 90, 90 + 3 * 360], reading: (angle) => -angle };
+  const kindOf = { 1: 'swing', 3: 'rotate' } as const;
+  const { G, warnings } = evaluated({ ...swung, row: ({ seq }) => ({ kind: kindOf[seq as 1 | 3] ?? 'settle', good: null }) });
+  // Mirrored, the motion is not quite that of sources that repel: the pull goes with φ − θ.
+  expect(relativeDifference(G?.value ?? NaN, -trueG)).toBeLessThan(0.02);
+  expect(warnings.map(({ code }) => code)).toEqual(expect.arrayContaining(['sign']));
+  expect(warnings.map(({ code }) => code)).not.toContain('few-dwells');
+});
+
 test('is refused without a whole turn between the ramps', () => {
   expect(() => evaluated(rotation(1, 900))).toThrow('steps.csv: the method "modulation" needs a rotation');
 });
