@@ -2,12 +2,11 @@ import { useState } from 'react';
 import { View } from 'react-native';
 import { BudgetBars } from '@/components/charts';
 import { Body, Button, Label, Num, Section } from '@/components/ui';
-import { inputWords } from '@/shared/evaluation/input-words';
+import { inputWords, unitOfInput } from '@/shared/evaluation/input-words';
 import type { BudgetLine } from '@/shared/evaluation/result';
 import { formatPercent } from '@/shared/lib/format-number';
 import { formatUncertain, uncertainParts } from '@/shared/lib/format-uncertain';
 import type { RigDocument } from '@/shared/rig/document';
-import { unitOfInput } from './evaluation-words';
 
 interface BudgetPanelProps {
   lines: readonly BudgetLine[] | null;

@@ -5,7 +5,7 @@ import { addressOf, useLab, useLabQuery, wordsOf } from '@/components/api';
 import { ReversalPlot } from '@/components/charts';
 import { DownloadLink } from '@/components/runs/download-link';
 import { Icon, Label, Loading, ProblemNotice, Screen, Section, Select, useWide } from '@/components/ui';
-import type { EvaluationView, ListedEvaluation } from '@/shared/contracts/evaluations';
+import { downloadReport, type EvaluationView, type ListedEvaluation } from '@/shared/contracts/evaluations';
 import { downloadArchive, getRun, type RunView } from '@/shared/contracts/runs';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { formatDayAndClock } from '@/shared/lib/format-time';
@@ -127,6 +127,15 @@ function Evaluated({ view, evaluation, result, panel, back, choice, freeze }: Ev
           fileName={`evenfall-${view.id}.zip`}
           testID="archive"
         />
+        {result.G === null ? null : (
+          <DownloadLink
+            framed
+            label="Report (PDF)"
+            address={addressOf(downloadReport, { params: { labId, evaluationId: evaluation.id } })}
+            fileName={`evenfall-report-${evaluation.id.slice(0, 8)}.pdf`}
+            testID="report"
+          />
+        )}
       </View>
       <Label>
         Evaluated {formatDayAndClock(Date.parse(evaluation.createdAt), timeZone)} by {evaluation.createdBy}

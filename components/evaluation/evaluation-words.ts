@@ -6,7 +6,6 @@ import { whiteUntil, type ResidualAllanPoint } from '@/shared/evaluation/residua
 import type { EvaluationResult, RegressionResult } from '@/shared/evaluation/result';
 import { studentTProbability } from '@/shared/statistics/student-t';
 import type { ProtocolDocument } from '@/shared/protocol/document';
-import type { RigDocument } from '@/shared/rig/document';
 
 /** The words of an evaluation. Pure. */
 
@@ -36,18 +35,6 @@ export function registeredWords(
 
 export const softwareWords = (version: string | null): string =>
   version === null ? 'The version of the software was not kept' : `Software Evenfall ${version}`;
-
-const knownUnits: Record<string, string> = { reversal_rad: 'rad', modulation_rad: 'rad', period_s: 's', decayTime_s: 's' };
-
-/** Unit of a budget line: that of the rig's quantity at the path. */
-export function unitOfInput(input: string, rig: RigDocument | null): string {
-  const known = knownUnits[input];
-  if (known !== undefined) return known;
-  let at: unknown = rig;
-  for (const name of input.split(/[.[\]]/).filter(Boolean))
-    at = typeof at === 'object' && at !== null ? (at as Record<string, unknown>)[name] : undefined;
-  return typeof at === 'object' && at !== null && 'unit' in at && typeof at.unit === 'string' ? at.unit : '';
-}
 
 const methods: Record<EvaluationResult['method'], string> = {
   equilibrium: 'equilibrium method',

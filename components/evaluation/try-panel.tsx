@@ -3,13 +3,13 @@ import { View } from 'react-native';
 import { Body, Button, Field, Label, Panel, Section, Select } from '@/components/ui';
 import { readDecimal } from '@/components/ui/read-decimal';
 import type { GBasis } from '@/shared/evaluation/g-basis';
-import { inputWords } from '@/shared/evaluation/input-words';
+import { inputWords, unitOfInput } from '@/shared/evaluation/input-words';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { documentedValue, tryValues, type TriedValue } from '@/shared/evaluation/try-values';
 import { formatPercent, UNIT_OF_G, unitSign } from '@/shared/lib/format-number';
 import { formatUncertain } from '@/shared/lib/format-uncertain';
 import type { RigDocument } from '@/shared/rig/document';
-import { changeWords, unitOfInput } from './evaluation-words';
+import { changeWords } from './evaluation-words';
 import { UncertainText } from './uncertain-text';
 
 interface TryPanelProps {

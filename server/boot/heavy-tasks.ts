@@ -3,6 +3,7 @@ import { readArchive } from '@/shared/archive/read-archive';
 import { evaluateArchive } from '@/shared/evaluation/evaluate-archive';
 import { rehearse } from '../engine/rehearsal/rehearse';
 import { zipArchive } from '../evaluation/archive-files';
+import { measurementReport } from '../evaluation/report';
 import { sha256Hex } from '../evaluation/sha256';
 import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import { rehearsalParts } from './rehearsal-parts';
@@ -17,6 +18,7 @@ export const heavyTasks: HeavyTasks = {
     return { outcome, reason: outcome === 'finished' ? '' : facts.reason, steps, events, channels, startedAtUtcMs, endedAtUtcMs };
   },
   zipArchive: async (input) => zipArchive(buildArchive(input, sha256Hex)),
+  report: (input) => measurementReport(input),
   evaluate: async (input, { channel }) => {
     const archive = readArchive(buildArchive(input, sha256Hex), sha256Hex);
     const { result, curves, basis } = evaluateArchive(archive, { trials, besides: true, ...(channel === null ? {} : { channel }) });

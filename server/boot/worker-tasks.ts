@@ -70,6 +70,7 @@ export function createWorkerTasks(): HeavyTasks & { close(): Promise<void> } {
     rehearse: on(jobs, 'rehearse'),
     evaluate: on(jobs, 'evaluate'),
     zipArchive: on(downloads, 'zipArchive'),
+    report: on(downloads, 'report'),
     close: async () => {
       await Promise.all([jobs.close(), downloads.close()]);
     },

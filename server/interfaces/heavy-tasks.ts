@@ -2,6 +2,7 @@ import type { BuildArchiveInput } from '@/shared/archive/build-archive';
 import type { ChainedEvent, ChannelSeries, RunStart, SimulatedRun, StepRow } from '@/shared/archive/run-records';
 import type { GBasis } from '@/shared/evaluation/g-basis';
 import type { EvaluationResult, FitCurve } from '@/shared/evaluation/result';
+import type { ReportInput } from './report';
 
 /** What a rehearsal leaves to be stored. */
 export interface RehearsalRecords {
@@ -28,6 +29,8 @@ export interface HeavyTasks {
   rehearse(input: { start: RunStart & { simulated: SimulatedRun }; startUtcMs: number }): Promise<RehearsalRecords>;
   /** The archive of a run as a ZIP. */
   zipArchive(input: BuildArchiveInput): Promise<Uint8Array>;
+  /** The measurement report of an evaluation as a PDF. */
+  report(input: ReportInput): Promise<Uint8Array>;
   /**
    * Evaluates the archive that `zipArchive` would give.
    * @throws Error whose message says what makes the archive unusable

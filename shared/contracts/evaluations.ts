@@ -81,3 +81,13 @@ export const recomputeEvaluation = defineRoute({
   response: evaluationViewSchema,
   problems: ['not-found', 'not-possible-now'],
 });
+export const downloadReport = defineRoute({
+  name: 'downloadReport',
+  summary: 'The measurement report of an evaluation (PDF)',
+  method: 'GET',
+  path: '/labs/:labId/evaluations/:evaluationId/report.pdf',
+  access: 'read',
+  status: 200,
+  produces: 'application/pdf',
+  problems: ['not-found', 'not-possible-now'],
+});

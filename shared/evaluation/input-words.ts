@@ -1,3 +1,5 @@
+import type { RigDocument } from '../rig/document';
+
 const inWords: Record<string, string> = {
   reversal_rad: 'near − far, scatter of dwells',
   period_s: 'period',
@@ -23,3 +25,15 @@ const inWords: Record<string, string> = {
 
 /** What an input of the budget is called for people; the path itself where there is no word for it. */
 export const inputWords = (input: string): string => inWords[input] ?? input;
+
+const knownUnits: Record<string, string> = { reversal_rad: 'rad', modulation_rad: 'rad', period_s: 's', decayTime_s: 's' };
+
+/** Unit of a budget line: that of the rig's quantity at the path. */
+export function unitOfInput(input: string, rig: RigDocument | null): string {
+  const known = knownUnits[input];
+  if (known !== undefined) return known;
+  let at: unknown = rig;
+  for (const name of input.split(/[.[\]]/).filter(Boolean))
+    at = typeof at === 'object' && at !== null ? (at as Record<string, unknown>)[name] : undefined;
+  return typeof at === 'object' && at !== null && 'unit' in at && typeof at.unit === 'string' ? at.unit : '';
+}

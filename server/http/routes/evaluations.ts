@@ -7,6 +7,7 @@ import { audited } from '../audited';
 import { channelToEvaluate } from '../channel-to-evaluate';
 import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
+import { reportInputOf } from '../report-input';
 import { mount } from '../route-context';
 import { loadRun } from '../run-view';
 
@@ -94,5 +95,13 @@ export const evaluationRoutes = [
     const evaluation = await audited(context, { kind: 'run.evaluation-recomputed', data }, (tx) => store.queueEvaluation(tx, wanted));
     services.pokeJobs();
     return viewOf(evaluation);
+  }),
+
+  mount(contracts.downloadReport, async ({ params, membership, services, res }) => {
+    const evaluation = await loadEvaluation(services.database.db, membership.labId, params.evaluationId);
+    const pdf = await services.tasks.report(await reportInputOf(services, evaluation));
+    res.set('Content-Disposition', `attachment; filename="evenfall-report-${evaluation.id.slice(0, 8)}.pdf"`);
+    res.type('application/pdf').send(Buffer.from(pdf.buffer, pdf.byteOffset, pdf.byteLength));
+    return undefined;
   }),
 ];

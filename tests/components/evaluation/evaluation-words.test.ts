@@ -1,5 +1,6 @@
-import { agreementOf, changeWords, enWords, regressionWords, registeredWords, unitOfInput } from '@/components/evaluation/evaluation-words';
+import { agreementOf, changeWords, enWords, regressionWords, registeredWords } from '@/components/evaluation/evaluation-words';
 import { placeOfWarning } from '@/components/evaluation/warning-places';
+import { unitOfInput } from '@/shared/evaluation/input-words';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { protocol } from '../fixtures/run';
 

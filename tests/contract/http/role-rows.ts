@@ -211,5 +211,6 @@ export const rows: Readonly<Record<string, Row>> = {
   removePushDevice: { params: () => ({ deviceId: nobody }), allowed: 404 },
   freezeEvaluation: { params: ({ labId }) => ({ labId, evaluationId: nobody }), body: () => ({ reason: 'for the paper' }), allowed: 404 },
   recomputeEvaluation: { params: ({ labId, evaluationId }) => ({ labId, evaluationId }), allowed: 409 },
+  downloadReport: { params: ({ labId, evaluationId }) => ({ labId, evaluationId }), allowed: 409 },
   getEvaluation: { params: ({ labId, evaluationId }) => ({ labId, evaluationId }), allowed: 200 },
 };

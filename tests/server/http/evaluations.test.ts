@@ -84,6 +84,10 @@ test('a rehearsal of the short protocol is stored like a run, and its evaluation
   const kept = JSON.parse(new TextDecoder().decode(readZip(zip.body as Buffer).get('evaluation.json'))) as Record<string, unknown>;
   expect(kept).toMatchObject({ G: done.result?.G, frozen: { by: 'Tam Ferrowdale', reason: 'for the thesis', software: done.software } });
 
+  const report = await lab.as('viewer', 'GET', `${at}/report.pdf`).responseType('blob').expect(200);
+  expect((report.body as Buffer).toString('latin1', 0, 5)).toBe('%PDF-');
+  expect(report.headers['content-type']).toBe('application/pdf');
+
   const again = await lab.as('analyst', 'POST', `${at}/recomputations`).expect(202);
   expect(again.body).toMatchObject({ state: 'queued', recomputes: done.id, channel: 'deflection' });
   await lab.services.idle();

@@ -1,0 +1,178 @@
+import { inputWords, unitOfInput } from '@/shared/evaluation/input-words';
+import { residualAllan } from '@/shared/evaluation/residual-allan';
+import type { EvaluationResult } from '@/shared/evaluation/result';
+import { formatFixed, formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
+import { formatUncertain } from '@/shared/lib/format-uncertain';
+import type { ReportInput } from '../interfaces/report';
+import { ReportPage } from './report-page';
+
+const ofG = (value: number, u: number | null) => formatUncertain({ value, u, unit: UNIT_OF_G });
+const utc = (ms: number | null) =>
+  ms === null
+    ? '–'
+    : new Date(ms)
+        .toISOString()
+        .replace('T', ' ')
+        .replace(/\.\d+Z$/, ' UTC');
+const micro = 1e6;
+
+/** The measurement report of one evaluation as a PDF: G with its uncertainty, how it was found, what it rests on. Every number has its u and its unit beside it. */
+export function measurementReport(input: ReportInput, { compress = true } = {}): Promise<Uint8Array> {
+  const { run, evaluation, result } = input;
+  const title = `Measurement report: ${run.protocolName} on ${run.rigName}`;
+  const page = new ReportPage({ title, dated: new Date(Date.parse(input.frozen?.at ?? evaluation.at)), compress });
+  page.title(title);
+  about(page, input);
+  resultPart(page, input);
+  quantities(page, result);
+  methodsPart(page, result);
+  budgetPart(page, input);
+  dwellsPart(page, result);
+  residualsPart(page, input);
+  remarks(page, result);
+  logPart(page, input);
+  return page.end();
+}
+
+function about(page: ReportPage, { run, evaluation, frozen, result, chainHead }: ReportInput): void {
+  if (run.rehearsal) page.line('A rehearsal on the simulated rig: no measurement.', { strong: true });
+  page.line(`Run ${run.id}, from ${utc(run.startedAtUtcMs)} to ${utc(run.endedAtUtcMs)}; operator ${run.operator}.`);
+  page.line(
+    `Rig ${run.rigName}, revision ${run.rigRevision}; mass set ${run.massSet}; protocol ${run.protocolName}, revision ${run.protocolRevision}.`,
+  );
+  page.line(
+    `Evaluation ${evaluation.id} at ${evaluation.at} by ${evaluation.by}, channel ${evaluation.channel ?? '–'}; software Evenfall ${evaluation.software ?? 'of a version not kept'}.`,
+  );
+  page.line(frozen === null ? 'Not frozen.' : `Frozen at ${frozen.at} by ${frozen.by}: ${frozen.reason}`);
+  page.line(
+    result.chain.valid === true
+      ? `Chain of ${result.chain.events} events, whole and unchanged. Head of the chain (SHA-256): ${chainHead ?? '–'}`
+      : 'There is no event chain to check.',
+  );
+}
+
+function resultPart(page: ReportPage, { result }: ReportInput): void {
+  const { G, relativeU, codata, monteCarlo } = result;
+  page.heading('Result');
+  if (G === null) return;
+  page.line(`G = ${ofG(G.value, G.u)}`, { strong: true, size: 14 });
+  page.line(
+    `In brackets the standard uncertainty (k = 1)${relativeU === null ? '' : `, ${formatPercent(relativeU)} of G`}${G.degreesOfFreedom === null ? '' : `; ${formatSignificant(G.degreesOfFreedom, 2)} degrees of freedom`}.`,
+  );
+  page.line(`CODATA 2022: ${ofG(codata.value, codata.u)}${codata.En === null ? '' : `; En = ${formatSignificant(codata.En, 2)}`}.`);
+  if (monteCarlo !== null) {
+    const [low, high] = monteCarlo.interval95;
+    page.line(
+      `Monte Carlo (JCGM 101, ${formatFixed(monteCarlo.trials, { decimals: 0 })} trials): ${ofG(monteCarlo.G_mean, monteCarlo.G_u)}; 95 % interval from ${ofG(low, null)} to ${ofG(high, null)}.`,
+    );
+  }
+  page.line(`Method: ${result.method}${result.registered === null ? '' : result.registered ? ', as registered' : ', not as registered'}.`);
+}
+
+function quantities(
+  page: ReportPage,
+  { reversal_rad: reversal, period_s: period, decayTime_s: decay, kappa_N_m: kappa, alignment }: EvaluationResult,
+): void {
+  page.heading('Measured quantities');
+  const offset = alignment?.clockOffset_s ?? null;
+  const rows: [string, { value: number; u: number | null } | null, string][] = [
+    ['near − far', reversal, 'rad'],
+    ['damped period', period, 's'],
+    ['decay time', decay, 's'],
+    ['torsion constant κ', kappa, 'N m/rad'],
+    [alignment?.applied === true ? 'clock offset, applied' : 'clock offset, not applied', offset, 's'],
+  ];
+  const told = rows.flatMap(([name, of, unit]) => (of === null ? [] : [[name, formatUncertain({ value: of.value, u: of.u, unit })]]));
+  page.table([['Quantity', 'Value and u'], ...told], [0.4, 0.6]);
+}
+
+function methodsPart(page: ReportPage, { methods }: EvaluationResult): void {
+  if (methods === undefined) return;
+  page.heading('Methods beside each other');
+  const rows = methods.map(({ method, G, difference, why }) => [
+    method,
+    G === null ? (why ?? 'none') : ofG(G.value, G.u),
+    difference === null ? '–' : ofG(difference.value, difference.u),
+  ]);
+  page.table([['Method', 'G', 'Difference from the result'], ...rows], [0.18, 0.45, 0.37]);
+}
+
+function budgetPart(page: ReportPage, { result: { budget }, rig }: ReportInput): void {
+  if (budget === null) return;
+  page.heading('Budget of uncertainty');
+  const rows = [...budget]
+    .sort((a, b) => b.share - a.share)
+    .map(({ input, value, u, contribution, share }) => [
+      inputWords(input),
+      formatUncertain({ value, u, unit: unitOfInput(input, rig) }),
+      formatUncertain({ value: contribution, u: null, unit: UNIT_OF_G }),
+      formatPercent(share),
+    ]);
+  page.table([['Input', 'Value and u', 'Contribution to u(G)', 'Share'], ...rows], [0.3, 0.28, 0.3, 0.12]);
+}
+
+function dwellsPart(page: ReportPage, { dwells }: EvaluationResult): void {
+  page.heading('Dwells');
+  const meanOf = (station: string) => {
+    const own = dwells.flatMap((dwell) =>
+      dwell.used && dwell.station === station && dwell.theta_rad !== null ? [dwell.theta_rad.value] : [],
+    );
+    return own.reduce((sum, value) => sum + value, 0) / Math.max(1, own.length);
+  };
+  const means = { near: meanOf('near'), far: meanOf('far') };
+  const points = dwells.flatMap(({ seq, station, used, theta_rad: theta }) =>
+    used && theta !== null && (station === 'near' || station === 'far')
+      ? [{ x: seq, y: (theta.value - means[station]) * micro, u: theta.u * micro, far: station === 'far' }]
+      : [],
+  );
+  page.plot({
+    points,
+    yWords: 'Centre less the mean of its station, µrad, with ± u: near disc, far ring',
+    xWords: 'row of the step log',
+    format: (y) => formatSignificant(y, 2),
+  });
+  const rows = dwells.map(({ seq, station, theta_rad: theta, samples, used, why }) => [
+    String(seq),
+    station,
+    theta === null ? 'no fit' : formatUncertain({ value: theta.value * 1e3, u: theta.u * 1e3, unit: 'mrad' }),
+    String(samples),
+    used ? 'used' : `not used: ${why ?? 'no reason given'}`,
+  ]);
+  page.table([['Row', 'Station', 'Centre', 'Samples', ''], ...rows], [0.1, 0.14, 0.28, 0.13, 0.35]);
+}
+
+function residualsPart(page: ReportPage, { curves }: ReportInput): void {
+  const points = residualAllan(curves);
+  if (points.length === 0) return;
+  page.heading('Allan deviation of the residuals');
+  const rows = points.map(({ tauS, deviationRad, u }) => [
+    `${formatSignificant(tauS, 3)} s`,
+    formatUncertain({ value: deviationRad * micro, u: u * micro, unit: 'µrad' }),
+  ]);
+  page.table([['Averaging time', 'Overlapping Allan deviation and u'], ...rows], [0.4, 0.6]);
+}
+
+function remarks(page: ReportPage, { warnings }: EvaluationResult): void {
+  if (warnings.length === 0) return;
+  page.heading('Remarks');
+  for (const { message } of warnings) page.line(message);
+}
+
+/** The moves and dwells, so far as the rows say when and where; the whole log is in the archive. */
+function logPart(page: ReportPage, { steps }: ReportInput): void {
+  page.heading('Extract of the step log');
+  const rows = steps
+    .slice(0, longestLog)
+    .map(({ seq, kind, station, startUtcMs, uStartS, angleEndDeg, uAngleDeg, outcome }) => [
+      String(seq),
+      kind,
+      station,
+      `${new Date(startUtcMs).toISOString()} ± ${formatSignificant(uStartS * 1e3, 2)} ms`,
+      angleEndDeg === null ? '–' : formatUncertain({ value: angleEndDeg, u: uAngleDeg, unit: 'deg' }),
+      outcome ?? '–',
+    ]);
+  page.table([['Row', 'Step', 'Station', 'Start and u', 'Turntable', 'Outcome'], ...rows], [0.08, 0.12, 0.12, 0.38, 0.18, 0.12]);
+  if (steps.length > longestLog) page.line(`${steps.length - longestLog} more rows are in the archive of the run.`);
+}
+
+const longestLog = 60;
