@@ -2,7 +2,7 @@ import { inputWords, unitOfInput } from '@/shared/evaluation/input-words';
 import { residualAllan } from '@/shared/evaluation/residual-allan';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { formatFixed, formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
-import { formatUncertain } from '@/shared/lib/format-uncertain';
+import { formatUncertain, uncertainParts } from '@/shared/lib/format-uncertain';
 import type { ReportInput } from '../interfaces/report';
 import { ReportPage } from './report-page';
 
@@ -62,8 +62,13 @@ function resultPart(page: ReportPage, { result }: ReportInput): void {
   page.line(`CODATA 2022: ${ofG(codata.value, codata.u)}${codata.En === null ? '' : `; En = ${formatSignificant(codata.En, 2)}`}.`);
   if (monteCarlo !== null) {
     const [low, high] = monteCarlo.interval95;
+    // As many digits as u has; the interval is itself the uncertainty.
+    const end = (at: number) => {
+      const { value, factor, unit } = uncertainParts({ value: at, u: monteCarlo.G_u, unit: UNIT_OF_G });
+      return value + factor + unit;
+    };
     page.line(
-      `Monte Carlo (JCGM 101, ${formatFixed(monteCarlo.trials, { decimals: 0 })} trials): ${ofG(monteCarlo.G_mean, monteCarlo.G_u)}; 95 % interval from ${ofG(low, null)} to ${ofG(high, null)}.`,
+      `Monte Carlo (JCGM 101, ${formatFixed(monteCarlo.trials, { decimals: 0 })} trials): ${ofG(monteCarlo.G_mean, monteCarlo.G_u)}; 95 % interval from ${end(low)} to ${end(high)}.`,
     );
   }
   page.line(`Method: ${result.method}${result.registered === null ? '' : result.registered ? ', as registered' : ', not as registered'}.`);
