@@ -5,6 +5,8 @@ import PDFDocument from 'pdfkit';
 
 const margin = 56;
 const plotPt = 130;
+/** Room that a plot takes, its words included. */
+export const wholePlotPt = plotPt + 40;
 const fontFiles = {
   plain: require.resolve('dejavu-fonts-ttf/ttf/DejaVuSans.ttf'),
   strong: require.resolve('dejavu-fonts-ttf/ttf/DejaVuSans-Bold.ttf'),
@@ -59,8 +61,9 @@ export class ReportPage {
     this.document.font('strong').fontSize(18).text(text, margin, this.document.y, { width: this.width }).moveDown(0.3);
   }
 
-  heading(text: string): void {
-    this.room(60);
+  /** `following`: what must have room under it on the same page. */
+  heading(text: string, following = 40): void {
+    this.room(20 + following);
     this.document
       .font('strong')
       .fontSize(12)
@@ -102,7 +105,7 @@ export class ReportPage {
   /** Points with ± u over x; near as discs, far as rings. */
   plot({ points, xWords, yWords, format }: Plot): void {
     if (points.length === 0) return;
-    this.room(plotPt + 40);
+    this.room(wholePlotPt);
     const { document } = this;
     const [left, top] = [margin + 60, document.y + 14];
     const width = this.width - 70;

@@ -4,7 +4,7 @@ import type { EvaluationResult } from '@/shared/evaluation/result';
 import { formatFixed, formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
 import { formatUncertain, uncertainParts } from '@/shared/lib/format-uncertain';
 import type { ReportInput } from '../interfaces/report';
-import { ReportPage } from './report-page';
+import { ReportPage, wholePlotPt } from './report-page';
 
 const ofG = (value: number, u: number | null) => formatUncertain({ value, u, unit: UNIT_OF_G });
 const utc = (ms: number | null) =>
@@ -117,7 +117,7 @@ function budgetPart(page: ReportPage, { result: { budget }, rig }: ReportInput):
 }
 
 function dwellsPart(page: ReportPage, { dwells }: EvaluationResult): void {
-  page.heading('Dwells');
+  page.heading('Dwells', wholePlotPt);
   const meanOf = (station: string) => {
     const own = dwells.flatMap((dwell) =>
       dwell.used && dwell.station === station && dwell.theta_rad !== null ? [dwell.theta_rad.value] : [],
