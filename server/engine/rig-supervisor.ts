@@ -1,6 +1,6 @@
 import { appendEvent, type Sha256 } from '@/shared/archive/chain';
 import type { RunStart } from '@/shared/archive/run-records';
-import type { Finding } from '@/shared/protocol/finding';
+import { type Finding, refusalCodeOf } from '@/shared/protocol/finding';
 import { planTimeline } from '@/shared/protocol/timeline';
 import type { Clock } from '../interfaces/clock';
 import type { RunJournals } from '../interfaces/run-journal';
@@ -115,8 +115,7 @@ export class RigSupervisor {
     this.assertFree(start.rigId);
     const findings = checkAtStart(start, this.parts.linkOf(start.rigId)?.controller() ?? null, this.parts.clock.utcMs());
     if (findings.length > 0) {
-      const code = findings.every((finding) => finding.code === 'not-yet') ? 'not-yet' : 'protocol-refused';
-      throw new StartRefused(code, findings.map(({ message }) => message).join(' '), findings);
+      throw new StartRefused(refusalCodeOf(findings), findings.map(({ message }) => message).join(' '), findings);
     }
     const link = this.readyLink(start.rigId);
     this.assertArmed(start);

@@ -1,3 +1,4 @@
+import { refusalCodeOf } from '@/shared/protocol/finding';
 import { ProblemError } from './problem-error';
 
 interface FindingLike {
@@ -10,11 +11,10 @@ interface FindingLike {
 export function refusalOf(findings: readonly FindingLike[]): ProblemError | null {
   const first = findings[0];
   if (first === undefined) return null;
-  const code = findings.every((finding) => finding.code === 'not-yet') ? 'not-yet' : 'protocol-refused';
   const where = first.path === null ? '' : `Step ${first.path}: `;
   const more = findings.length > 1 ? ` There are ${String(findings.length - 1)} more; each stands under errors.` : '';
   return new ProblemError(
-    code,
+    refusalCodeOf(findings),
     `${where}${first.message}${more}`,
     findings.map((finding) => ({ path: finding.path ?? '', message: finding.message, code: finding.code })),
   );

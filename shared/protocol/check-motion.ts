@@ -1,9 +1,10 @@
 import type { RigDocument, RigMotion } from '../rig/document';
-import type { DwellStep, KickStep, ProtocolDocument, Step, SwingStep, SwingTarget } from './document';
+import type { DwellStep, KickStep, ProtocolDocument, RotateStep, Step, SwingStep, SwingTarget } from './document';
 import { swingMove, UnplayableStep } from './durations';
 import type { Finding } from './finding';
 import { homingObstacle } from './homing';
 import { degrees, pathObstacles } from './motion-path';
+import { greatestPosition, rotationRefusals } from './rotation';
 import { resolveTarget, sideAt } from './stations';
 import { partsDurationS, partsOf, type StepPart } from './step-parts';
 
@@ -54,8 +55,7 @@ export function motionFindings(document: ProtocolDocument, rig: RigDocument, sta
   return walk.findings;
 }
 
-/** What the turntable link can write: microsteps from home, and microsteps per s or s² (its specification, Grammar). */
-const greatestPosition = 9_999_999;
+/** What the turntable link can write: microsteps per s or s² (its specification, Grammar). */
 const greatestRate = 99_999;
 
 function rangeFindings({ stepsPerDegree, minDeg, maxDeg, homeDeg, maxSpeed_deg_s, maxAcceleration_deg_s2 }: RigMotion): Finding[] {
@@ -117,6 +117,9 @@ function afterStep(step: Exclude<Step, { kind: 'repeat' }>, before: Situation, a
     case 'kick':
       checkKick(step, before, at);
       break;
+    case 'rotate':
+      checkRotation(step, before, at);
+      break;
     case 'dwell':
       checkDwell(step, before, at);
       break;
@@ -155,12 +158,22 @@ function knownStation(to: SwingTarget, { walk, path }: At): boolean {
   return false;
 }
 
+const homeFirst = 'The sources would move before their position is known. Put a home step before the first motion.';
+
+/** It turns back by itself, so it ends where it began. */
+function checkRotation(step: RotateStep, { angleDeg }: Situation, at: At): void {
+  const { rig, isLost } = at.walk;
+  if (rig.motion === undefined) return;
+  if (angleDeg === null && isLost) refuse(at, 'home-first', homeFirst);
+  for (const { code, message } of rotationRefusals(step, rig.motion, angleDeg)) refuse(at, code, message);
+}
+
 function checkKick(step: KickStep, { angleDeg }: Situation, at: At): void {
   const { rig, isLost } = at.walk;
   if (step.to !== undefined && !knownStation(step.to, at)) return;
   if (rig.motion === undefined) return;
   if (angleDeg === null) {
-    if (isLost) refuse(at, 'home-first', 'The sources would move before their position is known. Put a home step before the first motion.');
+    if (isLost) refuse(at, 'home-first', homeFirst);
     return;
   }
   const target = resolveTarget(rig, step.to ?? (sideAt(rig, angleDeg) === 'near' ? 'far' : 'near'));
@@ -192,8 +205,7 @@ function checkSwing(step: SwingStep, before: Situation, at: At): Situation {
   if (unknown || rig.motion === undefined) return { angleDeg: before.angleDeg, swingS: 0 };
   checkSpeed(step, rig.motion, at);
   const target = swingMove(step, rig, before.angleDeg ?? 0);
-  if (before.angleDeg === null && at.walk.isLost)
-    refuse(at, 'home-first', 'The sources would move before their position is known. Put a home step before the first motion.');
+  if (before.angleDeg === null && at.walk.isLost) refuse(at, 'home-first', homeFirst);
   const fromDeg = before.angleDeg ?? target.targetDeg;
   for (const { code, reason } of pathObstacles(rig.motion, fromDeg, target.targetDeg)) {
     const move =

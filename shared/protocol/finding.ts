@@ -19,3 +19,10 @@ export function withoutRepeats(findings: readonly Finding[]): Finding[] {
     return true;
   });
 }
+
+/**
+ * The code of a refusal by its findings: `not-yet` where anything in the protocol is not built yet, whatever else is said of it, because no
+ * correction would have it accepted.
+ */
+export const refusalCodeOf = (findings: readonly Pick<Finding, 'code'>[]): 'not-yet' | 'protocol-refused' =>
+  findings.some(({ code }) => code === 'not-yet') ? 'not-yet' : 'protocol-refused';

@@ -237,3 +237,55 @@ describe('kicks and shaped swings', () => {
     expect(places([home, near, kick(2000), shaped, beat], empty)).toEqual([]);
   });
 });
+
+describe('rotations', () => {
+  const rotate = (turns: number, period_s = 1800): Step => ({ kind: 'rotate', period_s, turns });
+  const rotations = (steps: Step[], rig: RigDocument) => check(steps, rig).filter(({ code }) => code !== 'not-yet');
+  const codes = (steps: Step[], rig: RigDocument) => rotations(steps, rig).map(({ code, path }) => `${code} ${path}`);
+
+  test('are accepted up to the turns that the cables stand, either way, whatever the limits of swings', () => {
+    const rig = withMotion({ turnsLimit: 3 });
+    expect(codes([home, rotate(3), near, rotate(-3), { kind: 'swing', to: 'far' }, dwell], rig)).toEqual([]);
+    const [finding] = rotations([home, rotate(-4)], rig);
+    expect(finding).toMatchObject({ code: 'turns-limit', path: '2.rotate' });
+    expect(finding?.message).toContain('up to 3 either way');
+  });
+
+  test('are refused on a rig that does not say what its cables stand', () => {
+    const [finding] = rotations([home, rotate(1)], demoRigWide);
+    expect(finding).toMatchObject({ code: 'turns-limit', path: '2.rotate' });
+    expect(finding?.message).toContain('motion.turnsLimit 0');
+  });
+
+  test('meet every keep-out arc, which is named', () => {
+    const [finding] = rotations([home, rotate(1)], withMotion({ turnsLimit: 3, keepOut: [[40, 60]] }));
+    expect(finding).toMatchObject({ code: 'keep-out', path: '2.rotate' });
+    expect(finding?.message).toContain('40° to 60°');
+  });
+
+  test('are no faster than the rig: the shortest turn is named', () => {
+    // 6 deg/s: a turn in 60 s.
+    const rig = withMotion({ turnsLimit: 3 });
+    expect(codes([home, rotate(1, 60)], rig)).toEqual([]);
+    const [finding] = rotations([home, rotate(1, 59)], rig);
+    expect(finding).toMatchObject({ code: 'too-fast', path: '2.rotate' });
+    expect(finding?.message).toContain('from 60 s');
+  });
+
+  test('keep to what the link can write: 624 turns of 16,000 microsteps and 15,999 more', () => {
+    const rig = withMotion({ turnsLimit: 1000 });
+    expect(codes([home, rotate(624, 60), rotate(-624, 60)], rig)).toEqual([]);
+    const [finding] = rotations([home, rotate(625, 60)], rig);
+    expect(finding).toMatchObject({ code: 'motion-out-of-range', path: '2.rotate' });
+    expect(finding?.message).toContain('up to 624');
+  });
+
+  test('end where they began, and are no swing that a beat could count from', () => {
+    expect(codes([home, near, rotate(2), beat], withMotion({ turnsLimit: 3 }))).toEqual(['beat-needs-swing 4.dwell']);
+  });
+
+  test('wait for homing where the position is not known', () => {
+    const findings = checkProtocol(protocol([rotate(1), home]), withMotion({ turnsLimit: 1 }), { angleDeg: null });
+    expect(findings.map(({ code, path }) => `${code} ${path}`)).toContain('home-first 1.rotate');
+  });
+});

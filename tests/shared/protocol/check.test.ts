@@ -19,6 +19,10 @@ const protocol = (steps: Step[], more: Partial<ProtocolDocument> = {}): Protocol
 });
 const check = (steps: unknown[], rig: RigDocument = demoRigWide) => checkProtocol({ formatVersion: 1, name: 'Test', steps }, rig);
 const places = (steps: unknown[], rig: RigDocument = demoRigWide) => check(steps, rig).map(({ code, path }) => `${code} ${path}`);
+const withTurns = (turnsLimit: number): RigDocument => ({
+  ...demoRigWide,
+  motion: { ...demoRigWide.motion, turnsLimit } as NonNullable<RigDocument['motion']>,
+});
 
 test('a sound protocol has no findings', () => {
   expect(
@@ -201,7 +205,7 @@ describe('what is not built yet is valid in the format and refused as not-yet', 
     ['a camera frame', { kind: 'mark', label: 'x', frame: true }, '2.mark'],
     ['shuffling', { kind: 'repeat', times: 2, order: 'shuffled', steps: [repeat(1, dwell)] }, '2.repeat'],
   ])('%s', (_, step, path) => {
-    expect(places([home, step])).toEqual([`not-yet ${path}`]);
+    expect(places([home, step], withTurns(2))).toEqual([`not-yet ${path}`]);
   });
 
   test('what is built of these fields is accepted', () => {
