@@ -14,6 +14,8 @@ export interface DeflectionPlotProps {
   timeZone: string;
   /** Where the sources stood when. */
   bands?: readonly StepBand[] | undefined;
+  /** Stretches whose samples are not evaluated. */
+  excluded?: readonly TimeSpan[] | undefined;
   heightPx?: number | undefined;
   title: string;
   /** The whole time that may be shown, when the data given are only a part of it. */

@@ -11,10 +11,11 @@ import { HiddenTable } from './hidden-table';
 import { useCanvasPlot } from './use-canvas-plot';
 
 const noBands: readonly StepBand[] = [];
+const noSpans: readonly TimeSpan[] = [];
 
 /** Many points on a canvas: drag or arrow keys to move, pinch, wheel, + and − or the buttons to zoom, a cursor that reads out. */
 export function DeflectionPlot(props: DeflectionPlotProps) {
-  const { utcMs, value, unit, timeZone, title, heightPx = 260, bands, onWindow } = props;
+  const { utcMs, value, unit, timeZone, title, heightPx = 260, bands, excluded, onWindow } = props;
   const { colors } = useTheme();
   const host = useRef<HTMLDivElement | null>(null);
   const from = props.whole?.from ?? utcMs[0] ?? 0;
@@ -35,6 +36,7 @@ export function DeflectionPlot(props: DeflectionPlotProps) {
     timeZone,
     heightPx,
     bands: bands ?? noBands,
+    excluded: excluded ?? noSpans,
     colors,
     span,
     whole,

@@ -14,6 +14,7 @@ interface CanvasPlotInput {
   timeZone: string;
   heightPx: number;
   bands: readonly StepBand[];
+  excluded: readonly TimeSpan[];
   colors: ThemeColors;
   span: TimeSpan;
   whole: TimeSpan;
@@ -75,6 +76,33 @@ function drawBands(plot: UPlot, bands: readonly StepBand[], colors: ThemeColors)
   ctx.restore();
 }
 
+/** Hatched over the whole height, so that it is told from a stand without its colour. */
+function drawExcluded(plot: UPlot, excluded: readonly TimeSpan[], colors: ThemeColors) {
+  const { ctx, bbox } = plot;
+  const stepPx = 9 * UPlot.pxRatio;
+  const right = bbox.left + bbox.width;
+  for (const { from, to } of excluded) {
+    const x1 = Math.max(bbox.left, plot.valToPos(from, 'x', true));
+    const x2 = Math.min(right, Math.max(x1 + UPlot.pxRatio, plot.valToPos(to, 'x', true)));
+    if (x2 <= x1) continue;
+    ctx.save();
+    ctx.beginPath();
+    ctx.rect(x1, bbox.top, x2 - x1, bbox.height);
+    ctx.clip();
+    ctx.strokeStyle = colors.lamp;
+    ctx.globalAlpha = 0.55;
+    ctx.lineWidth = UPlot.pxRatio;
+    ctx.strokeRect(x1, bbox.top, x2 - x1, bbox.height);
+    ctx.beginPath();
+    for (let x = x1 - bbox.height; x < x2; x += stepPx) {
+      ctx.moveTo(x, bbox.top + bbox.height);
+      ctx.lineTo(x + bbox.height, bbox.top);
+    }
+    ctx.stroke();
+    ctx.restore();
+  }
+}
+
 function drawMark(
   ctx: CanvasRenderingContext2D,
   { x, y, half, up, color }: { x: number; y: number; half: number; up: boolean; color: string },
@@ -125,7 +153,7 @@ function optionsOf(latest: RefObject<CanvasPlotInput>, width: number): UPlot.Opt
       },
     ],
     hooks: {
-      drawClear: [(plot) => drawBands(plot, latest.current.bands, colors)],
+      drawClear: [(plot) => drawBands(plot, latest.current.bands, colors), (plot) => drawExcluded(plot, latest.current.excluded, colors)],
       setCursor: [
         (plot) => latest.current.onCursor(plot.cursor.left == null || plot.cursor.left < 0 ? null : plot.posToVal(plot.cursor.left, 'x')),
       ],
@@ -143,7 +171,7 @@ function roomyRange(least: number | null, greatest: number | null): [number, num
 
 /** Draws on a canvas inside `host` and turns fingers, mouse and wheel into changes of the shown time. */
 export function useCanvasPlot(input: CanvasPlotInput): void {
-  const { host, utcMs, value, heightPx, colors, bands, unit, timeZone, span } = input;
+  const { host, utcMs, value, heightPx, colors, bands, excluded, unit, timeZone, span } = input;
   const data = useMemo(() => withGaps(utcMs, value), [utcMs, value]);
   const plot = useRef<UPlot | null>(null);
   const latest = useRef(input);
@@ -183,7 +211,7 @@ export function useCanvasPlot(input: CanvasPlotInput): void {
       if (drawn.data !== (data as UPlot.AlignedData)) drawn.setData(data, false);
       drawn.setScale('x', { min: span.from, max: span.to });
     });
-  }, [span, data, bands]);
+  }, [span, data, bands, excluded]);
 }
 
 const tapPx = 8;

@@ -7,10 +7,12 @@ import { standsOf, stepsOfLog } from '@/components/charts';
 import { DeflectionPlot } from '@/components/charts/deflection-plot';
 import type { StepBand } from '@/components/charts/deflection-plot-types';
 import { useCalm } from '@/components/runs/use-now';
-import { Button, Empty, Label, Loading, Panel, ProblemNotice, Screen, Select, useWide } from '@/components/ui';
+import { Button, Empty, Label, Loading, Panel, ProblemNotice, Screen, Section, Select, useWide } from '@/components/ui';
 import { readSamples } from '@/shared/contracts/data';
+import type { ExclusionView } from '@/shared/contracts/exclusions';
 import { listSteps, type StepRowView } from '@/shared/contracts/runs';
 import { formatFixed, unitSign } from '@/shared/lib/format-number';
+import { ExclusionList, useExclusions } from './exclusion-list';
 
 const points = 3000;
 
@@ -66,6 +68,7 @@ export function DataScreen() {
             </View>
           ) : null}
           <ChannelPlot key={channelId} runId={runId} channelId={channelId} />
+          <Excluded runId={runId} />
           <Button icon="import" label="Import a file" disabled={!may.ok} onPress={toImport} className="self-start" testID="to-import" />
           {may.ok ? null : <Label>{may.why}</Label>}
         </>
@@ -73,6 +76,29 @@ export function DataScreen() {
     </Screen>
   );
 }
+
+/** What evaluations do without, and where more can be excluded. */
+function Excluded({ runId }: { runId: string }) {
+  const exclusions = useExclusions(runId);
+  return (
+    <Section
+      title="Excluded by hand"
+      remark="Open a row of the step log to exclude its samples, or a part of them, with a reason. Evaluations asked for afterwards do without them."
+    >
+      {exclusions.exclusions.length === 0 && exclusions.error === null ? (
+        <Label testID="nothing-excluded">Nothing is or was excluded.</Label>
+      ) : (
+        <Panel>
+          <ExclusionList {...exclusions} />
+        </Panel>
+      )}
+      <Button label="Step log" onPress={() => router.push(`/runs/${runId}/log` as Href)} className="self-start" testID="to-log" />
+    </Section>
+  );
+}
+
+const spansInForce = (exclusions: readonly ExclusionView[]) =>
+  exclusions.filter(({ withdrawn }) => withdrawn === null).map(({ startUtcMs, endUtcMs }) => ({ from: startUtcMs, to: endUtcMs }));
 
 interface Span {
   fromUtcMs: number;
@@ -101,6 +127,8 @@ function ChannelPlot({ runId, channelId }: { runId: string; channelId: string })
   const detail = useSamples(runId, channelId, wanted === '' ? null : parseSpan(wanted));
   const rows = steps.data?.data.items;
   const bands = useMemo(() => bandsOf(rows ?? []), [rows]);
+  const { exclusions } = useExclusions(runId);
+  const excluded = useMemo(() => spansInForce(exclusions), [exclusions]);
   const coarse = all.data?.data;
   const first = coarse?.utcMs[0];
   const last = coarse?.utcMs.at(-1);
@@ -120,10 +148,11 @@ function ChannelPlot({ runId, channelId }: { runId: string; channelId: string })
         unit={coarse.channel.unit}
         timeZone={timeZone}
         bands={bands}
+        excluded={excluded}
         heightPx={wide ? 420 : 300}
         whole={{ from: first, to: last }}
         onWindow={onWindow}
-        title={`${coarse.channel.name} over the run, with the stands at near above and at far below`}
+        title={`${coarse.channel.name} over the run, with the stands at near above and at far below${excluded.length === 0 ? '' : `; ${String(excluded.length)} excluded, hatched`}`}
       />
       <Label>
         {formatFixed(coarse.total, { decimals: 0 })} samples

@@ -100,15 +100,26 @@ const outcomeLooks: Record<string, { icon: IconName; tone: Tone }> = {
   failed: { icon: 'failed', tone: 'danger' },
 };
 
-export function OutcomeCell({ row }: { row: StepRowView }) {
+/** How it ended, and how much of its samples is excluded. */
+export function OutcomeCell({ row, excluded }: { row: StepRowView; excluded: string | null }) {
   const look =
     row.good === false
       ? { icon: 'failed' as const, tone: 'danger' as const }
       : (outcomeLooks[row.outcome ?? 'running'] ?? { icon: 'note' as const, tone: 'dim' as const });
   return (
-    <View className="flex-row items-center gap-1.5">
-      <Icon name={look.icon} size={16} tone={look.tone === 'on-lamp' ? 'onLamp' : look.tone} />
-      <Body size={13}>{outcomeOf(row)}</Body>
+    <View className="gap-0.5">
+      <View className="flex-row items-center gap-1.5">
+        <Icon name={look.icon} size={16} tone={look.tone === 'on-lamp' ? 'onLamp' : look.tone} />
+        <Body size={13}>{outcomeOf(row)}</Body>
+      </View>
+      {excluded === null ? null : (
+        <View className="flex-row items-center gap-1.5" testID="row-excluded">
+          <Icon name="failed" size={16} tone="lamp" />
+          <Body size={13} tone="lamp">
+            {excluded}
+          </Body>
+        </View>
+      )}
     </View>
   );
 }

@@ -2,12 +2,16 @@ import { useLocalSearchParams, type Href } from 'expo-router';
 import { useEffect, useMemo, useState } from 'react';
 import { View } from 'react-native';
 import { addressOf, useLab, useLabQuery, wordsOf } from '@/components/api';
+import { excludedPart } from '@/components/data/stretch';
+import { useExclusions } from '@/components/data/exclusion-list';
 import { Empty, FilterGroup, Label, Loading, Panel, ProblemNotice, Screen, Select, Tabs, useWide } from '@/components/ui';
+import type { ChainedEvent } from '@/shared/archive/run-records';
 import { getRun, listSteps, stepsCsv, type StepRowView } from '@/shared/contracts/runs';
 import { zoneName } from '@/shared/lib/format-time';
 import { DownloadLink } from './download-link';
 import { ChainHead } from './event-list';
 import { isOver } from './run-words';
+import { StepDetails, stretchOf } from './step-details';
 import { everything, filterChoices, filterSteps, noFilter, type StepFilter } from './step-filter';
 import { StepCards, StepTable, type StepListProps } from './step-table';
 import { useEvents } from './use-events';
@@ -43,6 +47,7 @@ export function StepLogScreen() {
       ) : null}
       {rows.length === 0 ? null : (
         <LoggedSteps
+          runId={runId}
           rows={rows}
           events={events.data ?? []}
           protocol={run.data?.data.protocol ?? null}
@@ -54,12 +59,15 @@ export function StepLogScreen() {
   );
 }
 
-interface LoggedStepsProps extends Pick<StepListProps, 'rows' | 'events' | 'protocol' | 'timeZone'> {
+interface LoggedStepsProps extends Pick<StepListProps, 'rows' | 'protocol'> {
+  runId: string;
+  events: readonly ChainedEvent[];
+  timeZone: string;
   /** The row that a link leads to: open, and scrolled to. */
   first: number | null;
 }
 
-function LoggedSteps({ rows, events, protocol, timeZone, first }: LoggedStepsProps) {
+function LoggedSteps({ runId, rows, events, protocol, timeZone, first }: LoggedStepsProps) {
   const wide = useWide();
   const [filter, setFilter] = useState<StepFilter>(noFilter);
   const [zone, setZone] = useState<'lab' | 'utc'>('lab');
@@ -68,7 +76,19 @@ function LoggedSteps({ rows, events, protocol, timeZone, first }: LoggedStepsPro
     if (first !== null) document.querySelector(`[data-testid="events-${first}"]`)?.scrollIntoView({ block: 'center' });
   }, [first]);
   const shown = useMemo(() => filterSteps(rows, filter), [rows, filter]);
-  const list = { rows: shown, events, protocol, base: { timeZone: zone === 'utc' ? null : timeZone }, timeZone, open, onOpen: setOpen };
+  const exclusions = useExclusions(runId);
+  const list: StepListProps = {
+    rows: shown,
+    protocol,
+    base: { timeZone: zone === 'utc' ? null : timeZone },
+    excluded: (row) => {
+      const stretch = stretchOf(row);
+      return stretch === null ? null : excludedPart(exclusions.exclusions, stretch);
+    },
+    details: (row) => <StepDetails {...{ runId, row, events, timeZone }} exclusions={exclusions} />,
+    open,
+    onOpen: setOpen,
+  };
   return (
     <View className="gap-4">
       <Filters rows={rows} filter={filter} onChange={setFilter} />

@@ -1,21 +1,20 @@
-import { Fragment } from 'react';
+import { Fragment, type ReactNode } from 'react';
 import { Pressable, View } from 'react-native';
 import { Icon, Label, Num, Panel } from '@/components/ui';
-import type { ChainedEvent } from '@/shared/archive/run-records';
 import type { StepRowView } from '@/shared/contracts/runs';
-import { EventList } from './event-list';
 import { AngleCell, InstantCell, OutcomeCell, TitleCell, type TimeBase } from './step-cells';
 import type { TargetSource } from './run-words';
-import { eventsOf } from './use-events';
 
 export interface StepListProps {
   rows: readonly StepRowView[];
-  events: readonly ChainedEvent[];
   /** Of the run; null until it is there. */
   protocol: TargetSource | null;
   base: TimeBase;
-  timeZone: string;
-  /** Seq of the row whose events are shown. */
+  /** How much of the samples of a row is excluded. */
+  excluded: (row: StepRowView) => string | null;
+  /** What an open row shows. */
+  details: (row: StepRowView) => ReactNode;
+  /** Seq of the row that is open. */
   open: number | null;
   onOpen: (seq: number | null) => void;
 }
@@ -24,12 +23,12 @@ const head = 'py-2 pr-4 text-left font-sans text-13 font-regular text-dim';
 const cell = 'py-2.5 pr-4 align-top';
 
 /** The step log as a table, for wide screens. */
-export function StepTable({ rows, events, protocol, base, timeZone, open, onOpen }: StepListProps) {
+export function StepTable({ rows, protocol, base, excluded, details, open, onOpen }: StepListProps) {
   return (
     <table className="w-full border-collapse" data-testid="step-table">
       <thead>
         <tr className="border-b border-line">
-          {['', 'Step', 'Start', 'End', 'Turntable', 'Outcome', 'Events'].map((title) => (
+          {['', 'Step', 'Start', 'End', 'Turntable', 'Outcome', 'More'].map((title) => (
             <th key={title} scope="col" className={head}>
               {title}
             </th>
@@ -58,7 +57,7 @@ export function StepTable({ rows, events, protocol, base, timeZone, open, onOpen
                 <AngleCell row={row} />
               </td>
               <td className={cell}>
-                <OutcomeCell row={row} />
+                <OutcomeCell row={row} excluded={excluded(row)} />
               </td>
               <td className="align-top">
                 <OpenButton seq={row.seq} open={open === row.seq} onOpen={onOpen} />
@@ -68,7 +67,7 @@ export function StepTable({ rows, events, protocol, base, timeZone, open, onOpen
               <tr className="border-b border-line">
                 <td />
                 <td colSpan={6} className="pb-4">
-                  <EventList events={eventsOf(events, row)} timeZone={timeZone} />
+                  {details(row)}
                 </td>
               </tr>
             ) : null}
@@ -80,7 +79,7 @@ export function StepTable({ rows, events, protocol, base, timeZone, open, onOpen
 }
 
 /** The step log as cards, for phones. */
-export function StepCards({ rows, events, protocol, base, timeZone, open, onOpen }: StepListProps) {
+export function StepCards({ rows, protocol, base, excluded, details, open, onOpen }: StepListProps) {
   return (
     <View className="gap-3" role="list">
       {rows.map((row) => (
@@ -93,7 +92,7 @@ export function StepCards({ rows, events, protocol, base, timeZone, open, onOpen
                 </Num>
                 <TitleCell row={row} protocol={protocol} />
               </View>
-              <OutcomeCell row={row} />
+              <OutcomeCell row={row} excluded={excluded(row)} />
             </View>
             <View className="gap-2 pl-9">
               <Instant name="start">
@@ -107,7 +106,7 @@ export function StepCards({ rows, events, protocol, base, timeZone, open, onOpen
                 <OpenButton seq={row.seq} open={open === row.seq} onOpen={onOpen} />
               </View>
             </View>
-            {open === row.seq ? <EventList events={eventsOf(events, row)} timeZone={timeZone} /> : null}
+            {open === row.seq ? details(row) : null}
           </View>
         </Panel>
       ))}
@@ -128,7 +127,7 @@ function OpenButton({ seq, open, onOpen }: { seq: number; open: boolean; onOpen:
   return (
     <Pressable
       role="button"
-      aria-label={`${open ? 'Hide' : 'Show'} the events of step ${seq}`}
+      aria-label={`${open ? 'Hide' : 'Show'} the events and exclusions of step ${seq}`}
       aria-expanded={open}
       onPress={() => onOpen(open ? null : seq)}
       className="min-h-target min-w-target items-center justify-center rounded-action hover:bg-panel2"

@@ -133,6 +133,31 @@ export const importPieces = pgTable(
   ],
 );
 
+/** Stretches of runs whose samples are not evaluated. Never deleted; withdrawn once at most, then never changed (hand-written triggers). */
+export const exclusions = pgTable(
+  'exclusions',
+  {
+    labId: key('lab_id').notNull(),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
+    runId: key('run_id').notNull(),
+    startUtcMs: instant('start_at').notNull(),
+    endUtcMs: instant('end_at').notNull(),
+    madeAt: instant('made_at').notNull(),
+    madeBy: text('made_by').notNull(),
+    reason: text('reason').notNull(),
+    withdrawnAt: instant('withdrawn_at'),
+    withdrawnBy: text('withdrawn_by'),
+    withdrawnReason: text('withdrawn_reason'),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.id] }),
+    foreignKey({ columns: [table.labId, table.runId], foreignColumns: [runs.labId, runs.id] }),
+    index('exclusions_run').on(table.labId, table.runId, table.startUtcMs),
+  ],
+);
+
 export const evaluations = pgTable(
   'evaluations',
   {

@@ -1,6 +1,7 @@
 import type { BuildArchiveInput, FrozenEvaluation } from '@/shared/archive/build-archive';
 import type { ChannelSeries } from '@/shared/archive/run-records';
-import { findFrozenEvaluation } from '../store/evaluations';
+import { findFrozenEvaluation, type ListedRecord } from '../store/evaluations';
+import { exclusionsInForce } from '../store/exclusions';
 import { channelsOfRun, countSamples, readEvents, readSteps, type RunRecord } from '../store/runs-read';
 import { isoOf } from './maker';
 import { ProblemError } from './problem-error';
@@ -31,18 +32,29 @@ async function seriesOf(services: Services, run: RunRecord): Promise<ChannelSeri
   return series;
 }
 
-/** The evaluation frozen last, as the archive holds it. */
-async function frozenOf(services: Services, { labId, id }: RunRecord): Promise<FrozenEvaluation | null> {
-  const found = await findFrozenEvaluation(services.database.db, labId, id);
+/** A frozen evaluation as the archive holds it. */
+function frozenOf(found: ListedRecord | null): FrozenEvaluation | null {
   if (found === null || found.result === null || found.frozenAt === null) return null;
   const { result, frozenAt, frozenBy, frozenReason, software, channel } = found;
   return { ...result, frozen: { at: isoOf(frozenAt), by: frozenBy ?? '', reason: frozenReason ?? '', software, channel } };
 }
 
-/** Everything of an ended run, as the archive wants it. */
-export async function archiveInputOf(services: Services, run: RunRecord): Promise<BuildArchiveInput> {
+/** The stretches excluded at an instant; undefined where there is none, so that the archive has no file of them. */
+async function exclusionsAt(services: Services, { labId, id }: RunRecord, utcMs: number): Promise<Pick<BuildArchiveInput, 'exclusions'>> {
+  const rows = await exclusionsInForce(services.database.db, { labId, runId: id }, utcMs);
+  if (rows.length === 0) return {};
+  return { exclusions: rows.map(({ startUtcMs, endUtcMs, reason }) => ({ startUtcMs, endUtcMs, reason })) };
+}
+
+/**
+ * Everything of an ended run, as the archive wants it. Exclusions are those in force at `exclusionsAtUtcMs`; without it
+ * those of the frozen evaluation, so that the archive gives its numbers again, or, where none is frozen, those of now.
+ */
+export async function archiveInputOf(services: Services, run: RunRecord, exclusionsAtUtcMs?: number): Promise<BuildArchiveInput> {
   const { db } = services.database;
   const { start } = run;
+  const nowUtcMs = services.clock.utcMs();
+  const frozen = await findFrozenEvaluation(db, run.labId, run.id);
   return {
     run: {
       runId: run.id,
@@ -59,8 +71,9 @@ export async function archiveInputOf(services: Services, run: RunRecord): Promis
     steps: await readSteps(db, { labId: run.labId, runId: run.id }),
     events: await readEvents(db, { labId: run.labId, runId: run.id }, { afterSeq: 0 }),
     channels: await seriesOf(services, run),
-    evaluation: await frozenOf(services, run),
-    createdAt: isoOf(services.clock.utcMs()),
+    ...(await exclusionsAt(services, run, exclusionsAtUtcMs ?? frozen?.createdAt ?? nowUtcMs)),
+    evaluation: frozenOf(frozen),
+    createdAt: isoOf(nowUtcMs),
     software: `Evenfall ${softwareVersion}`,
     title: `${start.protocolName} on ${start.rigName}`,
   };

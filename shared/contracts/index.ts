@@ -5,6 +5,7 @@ import * as data from './data';
 import * as devices from './devices';
 import * as doors from './doors';
 import * as evaluations from './evaluations';
+import * as exclusions from './exclusions';
 import * as goingOn from './going-on';
 import * as link from './link';
 import * as morning from './morning';
@@ -39,6 +40,7 @@ export const routes: readonly RouteContract[] = [
   doors,
   data,
   devices,
+  exclusions,
   evaluations,
   work,
   alarms,

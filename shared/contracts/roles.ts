@@ -25,6 +25,7 @@ export const acts = {
   'alarm.acknowledge': upTo('analyst'),
   'alarm.shelve': upTo('operator'),
   'data.import': upTo('analyst'),
+  'data.exclude': upTo('analyst'),
   evaluate: upTo('analyst'),
   read: all,
 } as const satisfies Record<string, readonly Role[]>;

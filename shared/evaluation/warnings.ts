@@ -61,18 +61,17 @@ function reversalWarnings(archive: Archive, { reversal, solution }: Analysis): A
   return warnings;
 }
 
-/** Where the evaluation is not, or not only, what was decided before the data were seen. */
+/** Where the evaluation is not, or not only, what was decided before the data were seen; exclusions are told of in any case. */
 export function registrationWarnings({ exclusions }: Archive, { differences }: Pick<EvaluationPlan, 'differences'>): ArchiveWarning[] {
-  if (differences === null) return [];
   const warnings: ArchiveWarning[] = [];
-  if (differences.length > 0)
+  if (differences !== null && differences.length > 0)
     warnings.push({ code: 'not-as-registered', message: `The evaluation is not the registered one: ${differences.join('; ')}.` });
   if (exclusions.length > 0) {
     const stretches = exclusions.length === 1 ? 'one stretch' : `${exclusions.length} stretches`;
     const seconds = exclusions.reduce((sum, { startUtcMs, endUtcMs }) => sum + (endUtcMs - startUtcMs) / 1000, 0);
     warnings.push({
       code: 'excluded-by-hand',
-      message: `Beside the registered rules the samples of ${stretches}, ${seconds.toFixed(0)} s together, were excluded by hand (exclusions.csv).`,
+      message: `${differences === null ? 'The' : 'Beside the registered rules the'} samples of ${stretches}, ${seconds.toFixed(0)} s together, were excluded by hand (exclusions.csv).`,
     });
   }
   return warnings;

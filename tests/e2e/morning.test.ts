@@ -117,6 +117,36 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     );
   });
 
+  chapter('a dwell is excluded with a reason, from when to when, is hatched on the data page, and is withdrawn again', async () => {
+    const { items } = (await read(lab(), `${runId}/steps`)) as { items: StepRowView[] };
+    const seq = items.find(({ kind }) => kind === 'dwell')?.seq ?? 0;
+    await hand.taps(`events-${String(seq)}`);
+    await hand.taps('exclude');
+    await hand.at('exclude-sheet').waitFor();
+    expect(await hand.isEnabled('exclude-send')).toBe(false);
+    await hand.types('exclude-from', '-1');
+    await hand.sees('a number of seconds from 0 to');
+    await hand.types('exclude-from', '30');
+    await hand.types('exclude-reason', `a door, ${size}`);
+    await hand.shoots('exclude');
+    await hand.taps('exclude-send');
+    await hand.reads('row-excluded', 'partly excluded');
+    await hand.sees(`a door, ${size}`);
+    await hand.follows(`/runs/${runId}/data`, 'channel-plot');
+    await hand.hears('channel-plot', /1 excluded, hatched/);
+    await hand.shoots('excluded');
+    // By the keyboard alone: the one exclusion in force is withdrawn.
+    await hand.tabsTo('withdraw');
+    await hand.page.keyboard.press('Enter');
+    await hand.at('withdraw-sheet').waitFor();
+    await hand.tabsTo('withdraw-reason');
+    await hand.page.keyboard.type(`it was shut, ${size}`);
+    await hand.tabsTo('withdraw-send');
+    await hand.page.keyboard.press('Enter');
+    await hand.sees(new RegExp(`Withdrawn .* by .*: it was shut, ${size}`));
+    await hand.hears('channel-plot', /far below\. /);
+  });
+
   chapter('the replay shows table, deflection and step of any moment, by thumb, by keys and by its address', async () => {
     await hand.goes(`/runs/${runId}/replay`, 'replay-screen');
     const slider = hand.page.getByTestId('time-slider');

@@ -7,6 +7,7 @@ import { dataRoutes } from './data';
 import { deviceRoutes } from './devices';
 import { doorRoutes } from './doors';
 import { evaluationRoutes } from './evaluations';
+import { exclusionRoutes } from './exclusions';
 import { interventionRoutes } from './interventions';
 import { lineRoutes } from './line';
 import { liveRoutes } from './live';
@@ -34,6 +35,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...doorRoutes,
   ...dataRoutes,
   ...deviceRoutes,
+  ...exclusionRoutes,
   ...evaluationRoutes,
   ...workRoutes,
   ...alarmRoutes,

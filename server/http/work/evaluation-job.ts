@@ -1,6 +1,6 @@
 import * as z from 'zod';
 import { CutShort, type Job } from '@/server/interfaces/jobs';
-import { beginEvaluation, endEvaluation } from '@/server/store/evaluations';
+import { beginEvaluation, endEvaluation, findEvaluation } from '@/server/store/evaluations';
 import { findRun } from '@/server/store/runs-read';
 import { archiveInputOf } from '../archive-input';
 import type { Services } from '../services';
@@ -18,7 +18,9 @@ export async function workEvaluation(services: Services, job: Job): Promise<void
   const run = await findRun(db, evaluation.labId, evaluation.runId);
   if (run === null) throw new Error('the run of an evaluation is gone');
   try {
-    const found = await services.tasks.evaluate(await archiveInputOf(services, run), { channel: evaluation.channel });
+    const again = evaluation.recomputes === null ? null : await findEvaluation(db, evaluation.labId, evaluation.recomputes);
+    const input = await archiveInputOf(services, run, (again ?? evaluation).createdAt);
+    const found = await services.tasks.evaluate(input, { channel: evaluation.channel });
     const finishedAt = services.clock.utcMs();
     await endEvaluation(db, payload, { ...found, channel: evaluation.channel, software: softwareVersion, finishedAt });
   } catch (error) {

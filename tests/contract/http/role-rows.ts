@@ -178,6 +178,13 @@ export const rows: Readonly<Record<string, Row>> = {
   },
   revokeDeviceToken: { params: (things) => ({ ...rig(things), tokenId: nobody }), allowed: 404 },
   appendSamples: { raw: '{"time_utc": "2031-02-14T20:00:00Z", "value": 1}', allowed: 401 },
+  listExclusions: { params: run, allowed: 200 },
+  makeExclusion: { params: run, body: () => ({ startUtcMs: 2, endUtcMs: 1, reason: 'the door was open' }), allowed: 400 },
+  withdrawExclusion: {
+    params: ({ labId }) => ({ labId, exclusionId: nobody }),
+    body: () => ({ reason: 'the door was shut' }),
+    allowed: 404,
+  },
   startEvaluation: { params: run, body: () => ({ channel: 'no such channel' }), allowed: 422 },
   listEvaluations: { params: run, allowed: 200 },
   listGivenUpJobs: { params: lab, allowed: 200 },

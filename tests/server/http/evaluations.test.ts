@@ -1,6 +1,8 @@
 import { demoIds } from '@/db/demo/seed';
 import { readZip } from '@/server/evaluation/archive-files';
 import { evaluationViewSchema } from '@/shared/contracts/evaluations';
+import { exclusionViewSchema } from '@/shared/contracts/exclusions';
+import type { StepRowView } from '@/shared/contracts/runs';
 import { compareResults } from '@/shared/evaluation/compare-results';
 import { morningSheetSchema } from '@/shared/contracts/morning';
 import { CODATA_2022_G } from '@/shared/physics/constants';
@@ -29,6 +31,23 @@ const rehearse = async (body: object) => {
   await lab.advance(31_000);
   return lab.view(asked.body.id as string);
 };
+
+const archiveOf = async (runId: string) => {
+  const zip = await lab.as('viewer', 'GET', `${labPath}/runs/${runId}/archive.zip`).responseType('blob').expect(200);
+  return readZip(zip.body as Buffer);
+};
+
+const excludedIn = (files: ReadonlyMap<string, Uint8Array>) => new TextDecoder().decode(files.get('exclusions.csv'));
+
+/** Excludes the second dwell of a run. Returns its row. */
+async function excludes(runId: string) {
+  const steps = await lab.as('viewer', 'GET', `${labPath}/runs/${runId}/steps`).expect(200);
+  const row = (steps.body.items as StepRowView[]).filter(({ kind }) => kind === 'dwell')[1];
+  if (row === undefined) throw new Error('the run has two dwells');
+  const body = { startUtcMs: row.startUtcMs, endUtcMs: row.endUtcMs, reason: 'somebody came in' };
+  await lab.as('analyst', 'POST', `${labPath}/runs/${runId}/exclusions`).send(body).expect(201);
+  return row;
+}
 
 test('a rehearsal of the short protocol is stored like a run, and its evaluation gives back the G it was made with', async () => {
   const run = await rehearse({ seed: 3 });
@@ -80,13 +99,16 @@ test('a rehearsal of the short protocol is stored like a run, and its evaluation
   const audit = await lab.as('owner', 'GET', `${labPath}/audit?kind=run.evaluation-frozen`).expect(200);
   expect(audit.body.items[0].data).toMatchObject({ evaluationId: done.id, reason: 'for the thesis' });
 
-  const zip = await lab.as('viewer', 'GET', `${labPath}/runs/${run.id}/archive.zip`).responseType('blob').expect(200);
-  const kept = JSON.parse(new TextDecoder().decode(readZip(zip.body as Buffer).get('evaluation.json'))) as Record<string, unknown>;
+  const kept = JSON.parse(new TextDecoder().decode((await archiveOf(run.id)).get('evaluation.json'))) as Record<string, unknown>;
   expect(kept).toMatchObject({ G: done.result?.G, frozen: { by: 'Tam Ferrowdale', reason: 'for the thesis', software: done.software } });
 
   const report = await lab.as('viewer', 'GET', `${at}/report.pdf`).responseType('blob').expect(200);
   expect((report.body as Buffer).toString('latin1', 0, 5)).toBe('%PDF-');
   expect(report.headers['content-type']).toBe('application/pdf');
+
+  // What is excluded after the freezing changes nothing of what is frozen: neither its recomputation nor its archive.
+  const row = await excludes(run.id);
+  expect(excludedIn(await archiveOf(run.id))).toBe('');
 
   const again = await lab.as('analyst', 'POST', `${at}/recomputations`).expect(202);
   expect(again.body).toMatchObject({ state: 'queued', recomputes: done.id, channel: 'deflection' });
@@ -98,6 +120,47 @@ test('a rehearsal of the short protocol is stored like a run, and its evaluation
   if (done.result === null || recomputed.result === null) throw new Error('both came to a result');
   expect(compareResults(done.result, recomputed.result)).toEqual([]);
   await lab.as('analyst', 'POST', `${labPath}/evaluations/${recomputed.id}/freeze`).send({ reason: 'this too' }).expect(409);
+
+  // One asked for afterwards does without the dwell and says so; once it is frozen the archive tells what was excluded, and why.
+  const next = await ask(run.id).expect(202);
+  await lab.services.idle();
+  await lab.advance(31_000);
+  const nextAt = `${labPath}/evaluations/${next.body.id as string}`;
+  const { result } = evaluationViewSchema.parse((await lab.as('viewer', 'GET', nextAt).expect(200)).body);
+  expect(result?.dwells.filter(({ used }) => !used)).toMatchObject([{ seq: row.seq, why: 'no samples' }]);
+  expect(result?.warnings.map(({ code }) => code)).toContain('excluded-by-hand');
+  await lab.as('analyst', 'POST', `${nextAt}/freeze`).send({ reason: 'without the visitor' }).expect(200);
+  expect(excludedIn(await archiveOf(run.id))).toMatch(/^\d{4}-\S*Z,\d{4}-\S*Z,somebody came in$/m);
+});
+
+test('what cannot be excluded is refused with what would be right; who excluded what, and why, stays in the list and in the audit', async () => {
+  const run = await rehearse({ protocolId: await lab.issue(quickProtocol()), seed: 6 });
+  const at = `${labPath}/runs/${run.id}/exclusions`;
+  const began = Date.parse(run.startedAt ?? '');
+  const asks = (body: object) =>
+    lab.as('analyst', 'POST', at).send({ startUtcMs: began, endUtcMs: began + 9000, reason: 'a lorry', ...body });
+  expect((await asks({ endUtcMs: began }).expect(400)).body.errors).toEqual([{ path: 'endUtcMs', message: 'after startUtcMs' }]);
+  expect((await asks({ startUtcMs: began - 60_000 }).expect(400)).body.detail).toMatch(
+    /^The stretch reaches beyond the run, which goes from 2/,
+  );
+  expect((await asks({ endUtcMs: 1e300 }).expect(400)).body.errors[0].path).toBe('endUtcMs');
+  await asks({ reason: '  ' }).expect(400);
+  const made = exclusionViewSchema.parse((await asks({}).expect(201)).body);
+  expect((await asks({ startUtcMs: began + 1000 }).expect(409)).body.detail).toBe(
+    'Tam Ferrowdale excluded all of this stretch already: a lorry',
+  );
+  const withdraws = () => lab.as('operator', 'POST', `${labPath}/exclusions/${made.id}/withdraw`).send({ reason: 'no lorry' });
+  expect(excludedIn(await archiveOf(run.id))).toContain(',a lorry');
+  await withdraws().expect(200);
+  expect(excludedIn(await archiveOf(run.id))).toBe('');
+  expect((await withdraws().expect(409)).body.detail).toMatch(/ withdrew this exclusion already\.$/);
+  const { items } = (await lab.as('viewer', 'GET', at).expect(200)).body as { items: unknown[] };
+  expect(items).toEqual([{ ...made, withdrawn: { at: expect.any(String), by: expect.any(String), reason: 'no lorry' } }]);
+  const audit = await lab.as('owner', 'GET', `${labPath}/audit?kind=run`).expect(200);
+  const entries = (audit.body.items as { kind: string; data: { exclusionId?: string } }[]).filter(
+    ({ data }) => data.exclusionId === made.id,
+  );
+  expect(entries.map(({ kind }) => kind)).toEqual(['run.exclusion-withdrawn', 'run.data-excluded']);
 });
 
 test('a run whose data cannot give a result says why', async () => {

@@ -1,7 +1,9 @@
 import { sql } from 'drizzle-orm';
 import { instant, timestampOfUtcMs, utcMsOfTimestamp } from '@/db/schema/columns';
 import * as schema from '@/db/schema';
+import { insertExclusion } from '@/server/store/exclusions';
 import { databaseOfThisFile } from '@/tests/support/database';
+import { eveningUtcMs, makeLab, makeRig, makeRun, runStart } from './rows';
 
 const database = databaseOfThisFile();
 const run = (text: string) => database().connection.pool.query(text);
@@ -23,7 +25,7 @@ test('timestamps before 1970 and with other offsets are read right', () => {
   expect(instant).toBeDefined();
 });
 
-test.each(['rig_revisions', 'protocol_revisions', 'run_events', 'audit'])('%s refuses TRUNCATE', async (table) => {
+test.each(['rig_revisions', 'protocol_revisions', 'run_events', 'audit', 'exclusions'])('%s refuses TRUNCATE', async (table) => {
   await expect(run(`truncate ${table} cascade`)).rejects.toThrow('never changed or deleted');
 });
 
@@ -32,6 +34,19 @@ test('an audit row can be neither changed nor deleted', async () => {
   await run(`insert into audit values ('${lab?.id}', 1, '2031-05-06T07:08:09.123Z', 'kind', '{}', 'p', 'h')`);
   await expect(run(`update audit set kind = 'other'`)).rejects.toThrow('never changed or deleted');
   await expect(run('delete from audit')).rejects.toThrow('never changed or deleted');
+});
+
+test('an exclusion is never deleted, and never changed once it is withdrawn', async () => {
+  const { db } = database().connection;
+  const lab = await makeLab(db);
+  const start = runStart(lab.id, await makeRig(db, lab.id));
+  await makeRun(db, start);
+  const stretch = { labId: lab.id, runId: start.runId, startUtcMs: eveningUtcMs, endUtcMs: eveningUtcMs + 1 };
+  await insertExclusion(db, { ...stretch, madeAt: eveningUtcMs, madeBy: 'Tam', reason: 'a door' });
+  await expect(run('delete from exclusions')).rejects.toThrow('never changed or deleted');
+  await expect(run(`update exclusions set reason = 'no door'`)).rejects.toThrow('never changed or deleted');
+  await run(`update exclusions set withdrawn_at = now(), withdrawn_by = 'Tam', withdrawn_reason = 'no door'`);
+  await expect(run('update exclusions set withdrawn_at = null')).rejects.toThrow('never changed or deleted');
 });
 
 describe('samples', () => {
