@@ -49,11 +49,33 @@ export function connect({
   // A connection that breaks between two statements of a transaction has nobody else who listens; its next statement says so.
   pool.on('connect', (client) => client.on('error', () => undefined));
   return {
-    db: drizzle(pool, { schema }),
+    db: givingBack(drizzle(pool, { schema }), pool),
     pool,
     bulk: (work) => inBulkTransaction(pool, work),
     close: () => pool.end(),
   };
+}
+
+/**
+ * Every transaction gives its connection back, also one that broke before its first word. Drizzle's own would keep that place in the pool for ever
+ * (`begin` stands before its `try`), so that after as many outages nothing could be asked any more.
+ */
+function givingBack(db: NodePgDatabase<Schema>, pool: Pool): NodePgDatabase<Schema> {
+  const handles = new WeakMap<PoolClient, NodePgDatabase<Schema>>();
+  const handleOf = (client: PoolClient) => {
+    const known = handles.get(client) ?? drizzle(client, { schema });
+    handles.set(client, known);
+    return known;
+  };
+  db.transaction = async (work, config) => {
+    const client = await pool.connect();
+    try {
+      return await handleOf(client).transaction(work, config);
+    } finally {
+      client.release();
+    }
+  };
+  return db;
 }
 
 async function inBulkTransaction<T>(pool: Pool, work: (client: PoolClient, handle: Handle) => Promise<T>): Promise<T> {
