@@ -3,6 +3,8 @@ import { labKey, useLab, useLabMutation, useLabQuery } from '@/components/api';
 import { getEvaluation, listEvaluations, startEvaluation, type ListedEvaluation } from '@/shared/contracts/evaluations';
 
 const pollMs = 1000;
+/** A run that is over is evaluated by the server itself, minutes later. */
+const firstPollMs = 4000;
 
 export const atWork = (state: string | undefined) => state === 'queued' || state === 'running';
 
@@ -12,7 +14,8 @@ export function useEvaluations(runId: string) {
   const queries = useQueryClient();
   const first = useLabQuery(listEvaluations, { params: { runId } });
   const busy = first.data?.data.items.some(({ state }) => atWork(state)) ?? false;
-  const list = useLabQuery(listEvaluations, { params: { runId }, ...(busy ? { everyMs: pollMs } : {}) });
+  const none = first.data?.data.items.length === 0;
+  const list = useLabQuery(listEvaluations, { params: { runId }, ...(busy ? { everyMs: pollMs } : none ? { everyMs: firstPollMs } : {}) });
   const refresh = () => void queries.invalidateQueries({ queryKey: labKey(labId, listEvaluations) });
   const start = useLabMutation(startEvaluation, refresh);
   const items = list.data?.data.items ?? [];

@@ -30,14 +30,16 @@ export function NearFar({ sheet, rehearsal, timeZone }: { sheet: MorningSheet; r
 }
 
 function EarlierNight({ night, tonight, timeZone }: { night: MorningNight; tonight: MorningNight; timeZone: string }) {
-  const off = night.control ? null : beside(tonight.reversal_rad, night.reversal_rad);
+  const off = night.control !== tonight.control ? null : beside(tonight.reversal_rad, night.reversal_rad);
   return (
     <View className="flex-row flex-wrap items-baseline gap-x-3">
       <Link href={`/runs/${night.runId}` as Href} className="underline">
         <Num size={13}>{formatDay(Date.parse(night.startedAt), timeZone)}</Num>
       </Link>
       <Num size={13}>{formatDeflectionUncertain(night.reversal_rad)}</Num>
-      <Label>{night.control ? 'control, without sources' : off === null ? '' : `differs by ${formatSignificant(off, 2)} of its u`}</Label>
+      <Label>
+        {night.control ? 'control, without sources' : off === null ? '' : `differs by ${formatSignificant(off, 2)} u of the difference`}
+      </Label>
     </View>
   );
 }
@@ -67,7 +69,13 @@ export function Pendulum({ sheet: { tonight, earlier, drift } }: { sheet: Mornin
   return (
     <Section
       title="Pendulum"
-      remark={nights.length === 0 ? 'No earlier night to compare with.' : `Beside the mean of ${nights.length} earlier nights.`}
+      remark={
+        nights.length === 0
+          ? 'No earlier night to compare with.'
+          : nights.length === 1
+            ? 'Beside the night before.'
+            : `Beside the mean of the last ${nights.length} nights.`
+      }
     >
       <Panel className="flex-row flex-wrap gap-x-10 gap-y-3" testID="pendulum">
         <Beside label="damped period" now={{ ...tonight.period_s, unit: 's' }} before={before(({ period_s }) => period_s?.value ?? null)} />
@@ -75,14 +83,14 @@ export function Pendulum({ sheet: { tonight, earlier, drift } }: { sheet: Mornin
         {tonight.kappa_N_m === null ? null : (
           <Beside
             label="torsion constant κ"
-            now={{ ...tonight.kappa_N_m, unit: 'N.m' }}
+            now={{ ...tonight.kappa_N_m, unit: 'N.m/rad' }}
             before={before(({ kappa_N_m }) => kappa_N_m?.value ?? null)}
           />
         )}
         {drift === null ? null : (
           <>
             <Beside label="drift of the zero at the start" now={inMicro(drift.start)} before={null} />
-            <Beside label="at the end" now={inMicro(drift.end)} before={null} />
+            <Beside label="drift of the zero at the end" now={inMicro(drift.end)} before={null} />
           </>
         )}
       </Panel>

@@ -17,7 +17,7 @@ export function Room({ room }: Pick<MorningSheet, 'room'>) {
             </Body>
             <Label>
               {inStep === null
-                ? 'too few dwells to tell what goes in step with the swings'
+                ? 'what goes in step with the swings cannot be told: too few dwells in turn have samples'
                 : `${formatUncertain({ ...inStep, unit })} in step with the swings, near − far${goesAlong(inStep) ? ': look at the comparison in the evaluation' : ''}`}
             </Label>
           </View>

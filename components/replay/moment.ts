@@ -1,4 +1,4 @@
-import { valueAt, type Series } from '@/components/charts/curve';
+import { gapOf, valueAt, type Series } from '@/components/charts/curve';
 import type { StepRowView } from '@/shared/contracts/runs';
 import { trapezoid } from '@/shared/physics/trapezoid';
 import type { RigDocument } from '@/shared/rig/document';
@@ -7,14 +7,18 @@ import type { RigDocument } from '@/shared/rig/document';
 
 export interface Moment {
   row: StepRowView | null;
+  /** That step is over and the next has not begun: the run was held. */
+  between: boolean;
   /** Turntable, deg; null before its angle is known. */
   angleDeg: number | null;
   /** Measured pendulum angle, rad; null in a gap. */
   rad: number | null;
 }
 
-/** A gap in the samples longer than this is shown as one, ms. */
-const longestStrideMs = 60_000;
+/** A shorter gap in the samples is not shown, ms; nor is what lies between two of those that a long night is drawn by. */
+const leastGapMs = 60_000;
+/** Steps that follow each other may be told a little apart, ms. */
+const leastPauseMs = 1000;
 
 export interface NightRecord {
   rows: readonly StepRowView[];
@@ -27,8 +31,9 @@ export function momentAt({ rows, measured, rig }: NightRecord, utcMs: number): M
   const row = rows.findLast((one) => one.startUtcMs <= utcMs) ?? null;
   return {
     row,
+    between: row?.endUtcMs != null && utcMs > row.endUtcMs + leastPauseMs,
     angleDeg: row === null ? null : angleAt(row, rig, utcMs),
-    rad: measured === null ? null : valueAt(measured, utcMs, longestStrideMs),
+    rad: measured === null ? null : valueAt(measured, utcMs, Math.max(leastGapMs, gapOf(measured.x))),
   };
 }
 

@@ -74,8 +74,8 @@ function Night({ view, rows, measured, startUtcMs }: NightProps) {
   const strideMs = Math.max(1, (toUtcMs - fromUtcMs) / 1000);
   const jump = useMemo(() => (reducedMotion() ? (utcMs: number) => neighbourStart(rows, utcMs, 1) : null), [rows]);
   const { atUtcMs, playing, toggle, go } = usePlayer({ fromUtcMs, toUtcMs, startUtcMs, wholeS: Number(pace), jump });
-  const { row, angleDeg, rad } = momentAt({ rows, measured, rig: view.rig }, atUtcMs);
-  const link = (utcMs: number) => router.setParams({ at: new Date(Math.round(utcMs / 1000) * 1000).toISOString() });
+  const { row, between, angleDeg, rad } = momentAt({ rows, measured, rig: view.rig }, atUtcMs);
+  const link = (utcMs: number) => router.setParams({ at: new Date(Math.floor(utcMs / 1000) * 1000).toISOString() });
   const step = (by: 1 | -1) => go(neighbourStart(rows, atUtcMs, by) ?? (by === 1 ? toUtcMs : fromUtcMs));
   return (
     <View className="gap-4">
@@ -86,7 +86,9 @@ function Night({ view, rows, measured, startUtcMs }: NightProps) {
             {formatClock(atUtcMs, { timeZone, precision: 'seconds' })}
           </Num>
           <Label>{zoneName(timeZone)}</Label>
-          <Body testID="replay-step">{row === null ? 'Before the first step' : stepTitle(row, view.protocol)}</Body>
+          <Body testID="replay-step">
+            {row === null ? 'Before the first step' : between ? 'Held, between two steps' : stepTitle(row, view.protocol)}
+          </Body>
           <Label>
             turntable <Num size={13}>{formatDegrees(angleDeg)}</Num>
           </Label>

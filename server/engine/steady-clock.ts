@@ -12,6 +12,8 @@ const ONE_MOMENT_MS = 1;
 export class SteadyClock implements Clock {
   private lastAheadMs: number | null = null;
   private heldBackMs = 0;
+  /** Whether a run went on at the last look. */
+  private wentOn = false;
   private sleptMs: number;
 
   /** `slept`: how long the machine has slept since it was switched on, ms. */
@@ -46,9 +48,13 @@ export class SteadyClock implements Clock {
   private look(aheadMs: number): void {
     const byMs = this.lastAheadMs === null ? 0 : aheadMs - this.lastAheadMs;
     this.lastAheadMs = aheadMs;
+    const [began, goesOn] = [!this.wentOn, this.goesOn()];
+    this.wentOn = goesOn;
     const jumped = Math.abs(byMs) > HOST_STEP_MS;
-    if ((jumped || this.heldBackMs !== 0) && !this.goesOn()) this.heldBackMs = 0;
-    else if (jumped) this.heldBackMs += byMs - this.sleptMeanwhile();
+    const sleptMs = jumped ? this.sleptMeanwhile() : 0;
+    // What came before a run, or between two looks of which only one saw it, is none of its own.
+    if (!goesOn || began) this.heldBackMs = 0;
+    else if (jumped) this.heldBackMs += byMs - sleptMs;
   }
 
   private sleptMeanwhile(): number {

@@ -20,7 +20,8 @@ export async function morningOf(services: Services, run: RunRecord): Promise<Mor
   const startedAtUtcMs = run.startedAt ?? run.createdAt;
   const events = await readEvents(db, own, { afterSeq: 0 });
   const rows = await readSteps(db, own);
-  const newest = (await listEvaluations(db, run.labId, run.id)).find(({ state, result }) => state === 'done' && result !== null);
+  const evaluations = (await listEvaluations(db, run.labId, run.id)).filter(({ recomputes }) => recomputes === null);
+  const newest = evaluations.find(({ state, result }) => state === 'done' && result !== null);
   const angleDeg = run.start.rig.motion?.homeDeg ?? 0;
   return morningSheet({
     runId: run.id,
@@ -34,6 +35,7 @@ export async function morningOf(services: Services, run: RunRecord): Promise<Mor
     cover: await coverOf(services, run, newest?.channel ?? run.start.protocol.evaluation?.channel ?? null),
     room: await roomChannels(services, run, rows),
     result: newest?.result ?? null,
+    failure: newest === undefined ? (evaluations[0]?.error ?? null) : null,
     earlier: await earlierNights(services, run),
   });
 }
@@ -77,6 +79,7 @@ async function earlierNights(services: Services, run: RunRecord): Promise<Mornin
   const nights = await nightsBefore(services.database, {
     labId: run.labId,
     rigId: run.rigId,
+    massSetId: run.massSetId,
     startedAtUtcMs: run.startedAt ?? run.createdAt,
   });
   const control = nights.find((night) => night.control);

@@ -14,8 +14,6 @@ export const evaluationJobKind = 'evaluate';
 export interface EvaluationJob {
   labId: string;
   evaluationId: string;
-  /** Asked for by the server when the run ended: the morning sheet goes out once it is there. */
-  morning?: boolean;
 }
 
 export interface NewEvaluation {
@@ -26,18 +24,17 @@ export interface NewEvaluation {
   createdBy: string;
   /** The frozen evaluation that this one computes again. */
   recomputes?: string;
-  morning?: true;
 }
 
 /** Adds an evaluation and the job that works it off, both or neither. */
-export async function queueEvaluation(tx: Transaction, { morning, ...evaluation }: NewEvaluation): Promise<EvaluationRecord> {
+export async function queueEvaluation(tx: Transaction, evaluation: NewEvaluation): Promise<EvaluationRecord> {
   const row = one(
     await tx
       .insert(evaluations)
       .values({ ...evaluation, state: 'queued' })
       .returning(),
   );
-  const payload: EvaluationJob = { labId: row.labId, evaluationId: row.id, ...(morning === undefined ? {} : { morning }) };
+  const payload: EvaluationJob = { labId: row.labId, evaluationId: row.id };
   await enqueueJob(tx, { kind: evaluationJobKind, payload, labId: row.labId, nowUtcMs: evaluation.createdAt, maxAttempts: 3 });
   return row;
 }

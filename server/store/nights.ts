@@ -17,23 +17,23 @@ type NightRow = Pick<EvaluationResult, 'period_s'> & {
   kappa: EvaluationResult['kappa_N_m'];
 };
 
-/** Runs on the rig before an instant as their newest evaluation sees them, the newest first; no rehearsals. */
+/** Runs on the rig before an instant, with the same mass set or with none in place, as their newest evaluation sees them, the newest first; no rehearsals. */
 export async function nightsBefore(
   connection: Connection,
-  run: { labId: string; rigId: string; startedAtUtcMs: number },
+  run: { labId: string; rigId: string; massSetId: string | null; startedAtUtcMs: number },
 ): Promise<MorningNight[]> {
   const { rows } = await connection.pool.query<NightRow>(
     `with earlier as (
-       select lab_id, id, started_at, start #>> '{rig,sources,shape}' = 'none' as control from runs
+       select lab_id, id, started_at, mass_set_id, start #>> '{rig,sources,shape}' = 'none' as control from runs
        where lab_id = $1 and rig_id = $2 and not rehearsal and started_at < $3 order by started_at desc limit ${String(runsSearched)})
      select earlier.id, to_char(started_at at time zone 'UTC', 'YYYY-MM-DD"T"HH24:MI:SS.MS"Z"') as "startedAt", control,
        newest.result -> 'reversal_rad' as reversal, newest.result -> 'period_s' as period_s,
        newest.result -> 'decayTime_s' as "decayTime", newest.result -> 'kappa_N_m' as kappa
      from earlier, lateral (
-       select result from evaluations where lab_id = earlier.lab_id and run_id = earlier.id and state = 'done' and result is not null
+       select result from evaluations where lab_id = earlier.lab_id and run_id = earlier.id and state = 'done' and result is not null and recomputes is null
        order by created_at desc limit 1) as newest
-     where json_typeof(newest.result -> 'reversal_rad') = 'object' order by started_at desc`,
-    [run.labId, run.rigId, new Date(run.startedAtUtcMs)],
+     where json_typeof(newest.result -> 'reversal_rad') = 'object' and (control or mass_set_id is not distinct from $4) order by started_at desc`,
+    [run.labId, run.rigId, new Date(run.startedAtUtcMs), run.massSetId],
   );
   return rows.map(({ id, startedAt, control, reversal, period_s, decayTime, kappa }) => ({
     ...{ runId: id, startedAt, control, period_s, decayTime_s: decayTime, kappa_N_m: kappa },

@@ -74,7 +74,7 @@ const placesOfG =
 
 function unitOfPath(path: string): string {
   if (placesOfG.test(path)) return UNIT_OF_G;
-  if (path.endsWith('_N_m')) return 'N m';
+  if (path.endsWith('_N_m')) return 'N m/rad';
   if (path.endsWith('_rad') || path === 'pretend') return 'rad';
   return path.endsWith('_s') ? 's' : '';
 }

@@ -2,6 +2,7 @@ import type { RigDocument } from '../rig/document';
 
 const inWords: Record<string, string> = {
   reversal_rad: 'near − far, scatter of dwells',
+  modulation_rad: 'size of the modulation, scatter of turns',
   period_s: 'period',
   decayTime_s: 'decay time',
   'sources.orbit': 'orbit of the sources',

@@ -35,7 +35,8 @@ function wordsOfHold(code: string): string {
 
 /**
  * Every stretch in order of time: holds until the run went on or ended, interruptions that it overcame by itself, and dwells that do not
- * count. A dwell that a hold cut short counts as a dwell up to the hold and as a hold from there.
+ * count. A dwell that a hold cut short counts as a dwell up to the hold and as a hold from there; an interruption that a dwell outlived
+ * counts with the dwell, if that does not count.
  * @param end instant at which the run ended, or until which a hold that still lasts counts, UTC ms
  */
 export function lossesOf(rows: readonly LoggedRow[], events: readonly ChainedEvent[], end: number): Loss[] {
@@ -45,6 +46,8 @@ export function lossesOf(rows: readonly LoggedRow[], events: readonly ChainedEve
     const { toUtcMs, seq = rowAt(loss.fromUtcMs), ...rest } = loss;
     if (toUtcMs > loss.fromUtcMs) losses.push({ ...rest, seq, s: (toUtcMs - loss.fromUtcMs) / 1000 });
   };
+  const outlived = (fromUtcMs: number, toUtcMs: number) =>
+    rows.some(({ kind, startUtcMs, endUtcMs }) => kind === 'dwell' && startUtcMs <= fromUtcMs && endUtcMs !== null && endUtcMs >= toUtcMs);
   let held: ChainedEvent | null = null;
   const release = (toUtcMs: number) => {
     if (held === null) return;
@@ -59,7 +62,8 @@ export function lossesOf(rows: readonly LoggedRow[], events: readonly ChainedEve
     const { gapS, cause } = event.data;
     if (held === null && typeof gapS === 'number') {
       const words = interruptions[text(cause)] ?? 'interrupted';
-      add({ words, fromUtcMs: atUtcMs - 1000 * gapS, toUtcMs: atUtcMs, reason: words });
+      const fromUtcMs = atUtcMs - 1000 * gapS;
+      if (!outlived(fromUtcMs, atUtcMs)) add({ words, fromUtcMs, toUtcMs: atUtcMs, reason: words });
     }
     release(atUtcMs);
   }

@@ -12,20 +12,22 @@ export interface MayGoIn {
   facts: string[];
 }
 
-type RigNow = Pick<RigView, 'live' | 'arm' | 'locks' | 'activeRun' | 'document'>;
+type RigNow = Pick<RigView, 'live' | 'arm' | 'arming' | 'locks' | 'activeRun' | 'document'>;
 
 /** The most pressing reason counts; what the controller has not told is never taken for good. */
 export function mayGoIn(rig: RigNow, timeZone: string): MayGoIn {
   return { ...judged(rig, timeZone), facts: factsOf(rig, timeZone) };
 }
 
-function judged({ live, arm, locks, activeRun }: RigNow, timeZone: string): Pick<MayGoIn, 'answer' | 'words'> {
+function judged({ live, arm, arming, locks, activeRun }: RigNow, timeZone: string): Pick<MayGoIn, 'answer' | 'words'> {
   if (live.condition === 'ready' && live.moving) return { answer: 'no', words: 'The turntable is moving.' };
   if (activeRun !== null) return { answer: 'no', words: `A run of ${activeRun.protocolName} is on: hold or stop it first.` };
   if (arm !== null) {
     const until = formatClockWithZone(Date.parse(arm.until), { timeZone, weekday: true });
     return { answer: 'no', words: `Armed for ${arm.name} until ${until}: it may begin to move. Disarm it, or set your own lock.` };
   }
+  if (arming !== null) return { answer: 'no', words: `${arming.name} is arming it: it may begin to move when the exit delay is over.` };
+  if (live.condition === 'ready' && live.armKey === true) return { answer: 'no', words: 'Its arm key is on. Turn it off first.' };
   if (live.condition !== 'ready')
     return { answer: 'unknown', words: 'The controller is not heard. Look at the rig itself, and turn its key off before you reach in.' };
   const [lock] = locks;

@@ -1,17 +1,19 @@
-import { alarmKinds } from '../alarms/catalog';
+import { alarmKinds, type AlarmCode } from '../alarms/catalog';
 import { alarmOfHold } from '../alarms/of-holds';
 import type { ChainedEvent } from '../archive/run-records';
 import type { MorningSheet, MorningTick } from '../contracts/morning';
 import type { BudgetLine, EvaluationResult } from '../evaluation/result';
+import { quantityAt } from '../evaluation/budget-inputs';
 import { inputWords } from '../evaluation/input-words';
 import { formatPercent } from '../lib/format-number';
+import type { RigDocument } from '../rig/document';
 
 /** What to do before the next night, each with what it would bring. */
 
 type Next = MorningSheet['next'][number];
 
 /** Found anew from the data of every night; all else of the budget is geometry and comes from measurements of the rig. */
-const ofTheNight: ReadonlySet<string> = new Set(['reversal_rad', 'period_s', 'decayTime_s']);
+const ofTheNight: ReadonlySet<string> = new Set(['reversal_rad', 'modulation_rad', 'period_s', 'decayTime_s']);
 
 const sharesOf = (lines: readonly BudgetLine[]) => lines.reduce((sum, { share }) => sum + share, 0);
 
@@ -27,6 +29,9 @@ interface NextFacts {
   events: readonly ChainedEvent[];
   dwells: MorningSheet['dwells'];
   result: EvaluationResult | null;
+  /** Why the newest evaluation came to no result; null where it did, or where there was none. */
+  failure: string | null;
+  rig: RigDocument;
 }
 
 const mostPressing = 3;
@@ -38,11 +43,10 @@ export function nextNight(facts: NextFacts): Next[] {
 }
 
 /** What must be put right first. */
-function faults({ ticks, events, result }: NextFacts): Next[] {
+function faults({ ticks, events, result, failure }: NextFacts): Next[] {
   const bad = (code: MorningTick['code']) => ticks.find((tick) => tick.code === code && tick.ok === false);
   const first = (words: string): Next => ({ act: 'first', words });
-  const hold = events.findLast(({ kind }) => kind === 'held' || kind === 'stopped' || kind === 'failed');
-  const alarm = hold === undefined ? null : alarmOfHold(String(hold.data['code'] ?? ''));
+  const alarm = lastAlarm(events);
   const slipped = bad('edge');
   return [
     ...(bad('record') === undefined ? [] : [first(`${bad('record')?.words ?? ''}: say so with every figure of this night.`)]),
@@ -52,9 +56,26 @@ function faults({ ticks, events, result }: NextFacts): Next[] {
     ...(bad('samples') === undefined
       ? []
       : [first(`${bad('samples')?.words ?? ''}. Look at light, camera and the computer that records.`)]),
-    ...(result === null ? [first('Bring the deflection in, or choose its channel, and evaluate the run.')] : []),
+    ...(result !== null
+      ? []
+      : [
+          first(
+            failure === null
+              ? 'Bring the deflection in, or choose its channel, and evaluate the run.'
+              : `The evaluation failed: ${failure}. Look at the data, and evaluate again.`,
+          ),
+        ]),
   ];
 }
+
+/** What held or ended the run last, where nobody has put it right and resumed; null where that was a person. */
+function lastAlarm(events: readonly ChainedEvent[]): AlarmCode | null {
+  const last = events.findLast(({ kind }) => turns.has(kind));
+  const code = last?.data['code'];
+  return typeof code === 'string' && last?.kind !== 'resumed' && last?.kind !== 'finished' ? alarmOfHold(code) : null;
+}
+
+const turns: ReadonlySet<string> = new Set(['held', 'stopped', 'failed', 'resumed', 'finished']);
 
 /** Half of the dwells lost to the surroundings: another night like it is not worth its wear. */
 function quiet({ dwells, events }: NextFacts): Next[] {
@@ -69,7 +90,7 @@ function quiet({ dwells, events }: NextFacts): Next[] {
   ];
 }
 
-function gains({ result }: NextFacts): Next[] {
+function gains({ result, rig }: NextFacts): Next[] {
   const shares = sharesOfBudget(result?.budget ?? null);
   const relativeU = result?.relativeU ?? null;
   if (result === null || shares === null || relativeU === null)
@@ -85,7 +106,8 @@ function gains({ result }: NextFacts): Next[] {
         : `Go: a second night like this one takes u(G)/G from ${now} to ${after}.`,
   };
   const greatest = (result.budget ?? []).filter(({ input }) => !ofTheNight.has(input)).sort((a, b) => b.share - a.share)[0];
-  if (greatest === undefined) return [go];
+  // What shares its error with others may make u(G) larger when it is known better by itself.
+  if (greatest === undefined || quantityAt(rig, greatest.input.split('.'))?.group !== undefined) return [go];
   const measure: Next = {
     act: 'first',
     words: `Measure the ${inputWords(greatest.input)} twice as well: that takes u(G)/G from ${now} to ${better(0.75 * greatest.share)}.`,

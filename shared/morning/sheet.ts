@@ -27,6 +27,8 @@ export interface MorningFacts {
   room: readonly RoomChannel[];
   /** Of the newest evaluation that came to one. */
   result: EvaluationResult | null;
+  /** Why the newest evaluation came to no result; null where it did, or where there was none. */
+  failure: string | null;
   earlier: readonly MorningNight[];
 }
 
@@ -39,8 +41,9 @@ export function morningSheet(facts: MorningFacts): MorningSheet {
   const ended = rows.filter((row) => row.kind === 'dwell' && row.endUtcMs !== null);
   const done = ended.filter((row) => row.outcome === 'done');
   const dwells = { planned: plan.dwells, done: done.length, good: done.filter(({ good }) => good !== false).length };
-  const predictedRad = rig.sources.shape === 'none' ? null : (predictSignal(rig)?.signalRad ?? null);
-  const ticks = morningTicks({ ...facts, edgeToleranceDeg: slipToleranceDeg(rig), predictedRad });
+  const control = rig.sources.shape === 'none';
+  const predictedRad = control ? null : (predictSignal(rig)?.signalRad ?? null);
+  const ticks = morningTicks({ ...facts, edgeToleranceDeg: slipToleranceDeg(rig), predictedRad, control });
   return {
     plannedEndAt: plan.truncated ? null : new Date(plan.endUtcMs).toISOString(),
     dwells,
@@ -53,7 +56,7 @@ export function morningSheet(facts: MorningFacts): MorningSheet {
     room: roomOf(facts.room, rows),
     shares: sharesOfBudget(result?.budget ?? null),
     worst: worstOf(losses),
-    next: nextNight({ ticks, events, dwells, result }),
+    next: nextNight({ ...facts, ticks, dwells }),
   };
 }
 

@@ -29,6 +29,8 @@ export interface TickFacts {
   cover: SampleCover | null;
   record: RecordFacts;
   result: EvaluationResult | null;
+  /** Run without source masses. */
+  control: boolean;
   /** Near minus far that the rig document predicts, rad; null where it cannot. */
   predictedRad: number | null;
 }
@@ -47,7 +49,7 @@ export const morningTicks = (facts: TickFacts): MorningTick[] => [
 ];
 
 /** By the proof where there was one, else by near minus far of the whole night. */
-function firstPair({ events, result, predictedRad }: TickFacts): MorningTick {
+function firstPair({ events, result, predictedRad, control }: TickFacts): MorningTick {
   const code = 'first-pair';
   const proof = events.find(({ kind }) => kind === 'proof');
   if (proof !== undefined) {
@@ -56,6 +58,7 @@ function firstPair({ events, result, predictedRad }: TickFacts): MorningTick {
     const told = tests.filter((test) => ok || test.ok !== true).map(({ words }) => words);
     return { code, ok, words: ok ? 'First pair as predicted' : `First pair not as predicted: ${told.join('; ')}` };
   }
+  if (control) return { code, ok: null, words: 'A control: its near − far is tested in the evaluation' };
   const found = result?.reversal_rad?.value ?? null;
   if (found === null || predictedRad === null || predictedRad === 0)
     return { code, ok: null, words: 'No near − far to compare with the prediction yet' };

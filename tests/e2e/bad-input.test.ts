@@ -30,10 +30,14 @@ async function savedByKeeper(protocolId: string, change: (document: ProtocolDocu
 
 /** Lets lab time pass in strides of a second, so that what waits for an answer gives up sooner. */
 async function passUntil(holds: () => Promise<boolean>): Promise<void> {
-  await until(async () => {
-    await lab().pass(1);
-    return holds();
-  }, 'the line to be given up');
+  await until(
+    async () => {
+      await lab().pass(1);
+      return holds();
+    },
+    'the line to be given up',
+    90_000,
+  );
 }
 
 let babble: ControllerProcess;

@@ -37,7 +37,8 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
 
   chapter('G comes out in the notation of the GUM, beside the recommended value', async () => {
     await hand.goes(`/runs/${nights.get(size) ?? ''}`, 'result-screen');
-    await hand.taps('evaluate');
+    // Two minutes after the end of the run it is evaluated by itself.
+    await lab().pass(180);
     await hand.sees('G so far');
     await hand.tapsOn('Evaluation', 'link');
     await hand.at('evaluation-screen').waitFor();

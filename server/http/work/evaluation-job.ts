@@ -5,13 +5,12 @@ import { findRun } from '@/server/store/runs-read';
 import { archiveInputOf } from '../archive-input';
 import type { Services } from '../services';
 import { softwareVersion } from '../software';
-import { sendMorning } from './morning-job';
 
-const payloadSchema = z.strictObject({ labId: z.string(), evaluationId: z.string(), morning: z.boolean().optional() });
+const payloadSchema = z.strictObject({ labId: z.string(), evaluationId: z.string() });
 
 /** Evaluates a run in a worker thread, from the very archive that a reviewer would download. */
 export async function workEvaluation(services: Services, job: Job): Promise<void> {
-  const { morning, ...payload } = payloadSchema.parse(job.payload);
+  const payload = payloadSchema.parse(job.payload);
   const { db } = services.database;
   const evaluation = await beginEvaluation(db, payload);
   if (evaluation === null) return;
@@ -29,7 +28,6 @@ export async function workEvaluation(services: Services, job: Job): Promise<void
     await endEvaluation(db, payload, { error: why, finishedAt: services.clock.utcMs() });
     if (!isUnusable(error)) services.log.error({ err: error, runId: run.id }, 'an evaluation failed');
   }
-  if (morning === true) await sendMorning(services, run);
 }
 
 /** The data are at fault, not the program: trying again gives the same. */

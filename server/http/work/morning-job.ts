@@ -3,6 +3,7 @@ import type { RunStart } from '@/shared/archive/run-records';
 import { morningLines } from '@/shared/morning/words';
 import type { Job } from '../../interfaces/jobs';
 import { askForRunNotice } from '../../notify/run-notices';
+import type { Handle } from '../../store/database';
 import { listEvaluations, queueEvaluation } from '../../store/evaluations';
 import { enqueueJob } from '../../store/jobs';
 import { findRun, type RunRecord } from '../../store/runs-read';
@@ -15,28 +16,38 @@ import type { Services } from '../services';
 /** When a run is over it is evaluated, if it can be, and whoever started it gets the morning sheet. */
 
 export const morningJobKind = 'run.morning';
-const payloadSchema = z.strictObject({ labId: z.string(), runId: z.string() });
+const payloadSchema = z.strictObject({ labId: z.string(), runId: z.string(), looks: z.number().int() });
 
 /** Until then what devices and the simulated balance still had in hand is stored. */
 const settleMs = 120_000;
+/** An evaluation is looked for so often, and waited for no longer than an hour. */
+const lookAgainMs = 15_000;
+const mostLooks = 240;
+/** A run that was shorter is a trial, of which nobody wants a sheet (no source). */
+const shortestNightMs = 1_800_000;
 const byServer = 'Evenfall';
 
-export async function askForMorning(services: Services, { labId, runId }: RunStart): Promise<void> {
-  const nowUtcMs = services.clock.utcMs();
-  const payload: z.infer<typeof payloadSchema> = { labId, runId };
-  await enqueueJob(services.database.db, { kind: morningJobKind, payload, labId, nowUtcMs, dueAtUtcMs: nowUtcMs + settleMs });
-}
+export const askForMorning = ({ database, clock }: Services, { labId, runId }: RunStart): Promise<unknown> =>
+  lookIn(database.db, { labId, runId, looks: 0 }, { nowUtcMs: clock.utcMs(), inMs: settleMs });
 
+const lookIn = (db: Handle, payload: z.infer<typeof payloadSchema>, { nowUtcMs, inMs }: { nowUtcMs: number; inMs: number }) =>
+  enqueueJob(db, { kind: morningJobKind, payload, labId: payload.labId, nowUtcMs, dueAtUtcMs: nowUtcMs + inMs });
+
+/** Evaluates the run where nobody has, looks again until the evaluation is over, and sends the sheet. */
 export async function workMorning(services: Services, job: Job): Promise<void> {
-  const { labId, runId } = payloadSchema.parse(job.payload);
+  const { looks, ...own } = payloadSchema.parse(job.payload);
   const { db } = services.database;
-  const run = await findRun(db, labId, runId);
-  if (run === null) return;
-  const evaluated = (await listEvaluations(db, labId, runId)).length > 0;
-  const channel = evaluated ? null : await channelOf(services, run);
-  if (channel === null) return sendMorning(services, run);
-  const createdAt = services.clock.utcMs();
-  await db.transaction((tx) => queueEvaluation(tx, { labId, runId, channel, createdAt, createdBy: byServer, morning: true }));
+  const run = await findRun(db, own.labId, own.runId);
+  if (run === null || run.startedAt === null || (run.endedAt ?? run.startedAt) - run.startedAt < shortestNightMs) return;
+  const known = (await listEvaluations(db, own.labId, own.runId)).filter(({ recomputes }) => recomputes === null);
+  const atWork = known.some(({ state }) => state === 'queued' || state === 'running');
+  const channel = known.length > 0 ? null : await channelOf(services, run);
+  if ((channel === null && !atWork) || looks >= mostLooks) return sendMorning(services, run);
+  const nowUtcMs = services.clock.utcMs();
+  await db.transaction(async (tx) => {
+    if (channel !== null) await queueEvaluation(tx, { ...own, channel, createdAt: nowUtcMs, createdBy: byServer });
+    await lookIn(tx, { ...own, looks: looks + 1 }, { nowUtcMs, inMs: lookAgainMs });
+  });
   services.pokeJobs();
 }
 
@@ -52,7 +63,7 @@ async function channelOf(services: Services, run: RunRecord): Promise<string | n
 
 const states: Partial<Record<RunRecord['state'], string>> = { finished: 'Finished', stopped: 'Stopped', failed: 'Failed' };
 
-export async function sendMorning(services: Services, run: RunRecord): Promise<void> {
+async function sendMorning(services: Services, run: RunRecord): Promise<void> {
   const { labId, id: runId, start } = run;
   const sheet = await morningOf(services, run);
   // Nothing was measured: that it ended was told already.

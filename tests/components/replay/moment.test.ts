@@ -24,14 +24,27 @@ test('a swing speeds up and slows down between its two angles, in the time that 
 });
 
 test('before the first step and in a motion whose end is not known nothing is made up', () => {
-  expect(at(999)).toEqual({ row: null, angleDeg: null, rad: null });
+  expect(at(999)).toEqual({ row: null, between: false, angleDeg: null, rad: null });
   expect(at(130_000)).toMatchObject({ angleDeg: 20, row: { seq: 3 } });
 });
 
+test('while the run was held no step is said to go on', () => {
+  const held = [row(1, 'dwell', [0, 60_000], [20, 20]), row(2, 'dwell', [600_000, 660_000], [20, 20])];
+  const momentOf = (utcMs: number) => momentAt({ rows: held, measured: null, rig: demoRigWide }, utcMs);
+  expect([30_000, 300_000, 600_000].map((utcMs) => momentOf(utcMs).between)).toEqual([false, true, false]);
+});
+
+test('of a night so long that it is drawn by fewer samples than one a minute, what lies between two is no gap', () => {
+  const x = Array.from({ length: 100 }, (_, k) => 90_000 * k);
+  const measured = { x, y: x.map((ms) => ms / 1e9) };
+  expect(momentAt({ rows, measured, rig: demoRigWide }, 90_000 * 50 + 45_000).rad).toBeCloseTo((90_000 * 50 + 45_000) / 1e9, 9);
+});
+
 test('a gap in the deflection has no value', () => {
-  const measured = { x: [1000, 2000, 90_000], y: [1e-3, 2e-3, 3e-3] };
+  const seconds = [...Array(50).keys(), 200];
+  const measured = { x: seconds.map((second) => 1000 * second), y: seconds.map((second) => second / 1e3) };
   expect(momentAt({ rows, measured, rig: demoRigWide }, 1500).rad).toBeCloseTo(1.5e-3, 9);
-  expect(momentAt({ rows, measured, rig: demoRigWide }, 40_000).rad).toBeNull();
+  expect(momentAt({ rows, measured, rig: demoRigWide }, 120_000).rad).toBeNull();
 });
 
 test('from step to step, and no further than the run', () => {

@@ -45,6 +45,19 @@ test('a slow correction is followed', () => {
   }
 });
 
+test('what the machine slept before a run, and how far its clock crept while nobody looked, is none of the run', () => {
+  const { now, clock } = play();
+  now.goesOn = false;
+  clock.utcMs();
+  now.aheadMs += 8 * 3_600_000 + 300;
+  now.sleptMs += 8 * 3_600_000;
+  now.goesOn = true;
+  expect(clock.utcMs()).toBe(now.monotonicMs + now.aheadMs);
+  now.monotonicMs += 500;
+  now.aheadMs += 30;
+  expect(clock.utcMs()).toBe(now.monotonicMs + now.aheadMs - 30);
+});
+
 test('what the machine slept is followed, and no more', () => {
   const { now, clock } = play();
   now.sleptMs += 7_200_000;

@@ -200,12 +200,14 @@ test('a rehearsal of a draft, and one that is refused', async () => {
   expect((await lab.intervene(run.id, 'hold').expect(409)).body.detail).toContain('A rehearsal runs by itself');
 });
 
+const longSteps = quickProtocol().steps.map((step) => (step.kind === 'dwell' ? { ...step, for_s: 1000 } : step));
+
 test('a run that is over is evaluated by itself, and whoever started it gets its morning sheet', async () => {
-  const runId = await lab.run(quickProtocol({ name: 'A short night' }));
+  const runId = await lab.run(quickProtocol({ name: 'A short night', steps: longSteps }));
   await lab.until(runId, 'finished');
   outside.mails.length = 0;
   // Two minutes for what is still on its way, then the evaluation, then the message.
-  for (const ms of [121_000, 31_000, 31_000]) await lab.advance(ms);
+  for (const ms of [121_000, 31_000, 31_000, 31_000]) await lab.advance(ms);
   const { body } = await lab.as('viewer', 'GET', `${labPath}/runs/${runId}/evaluations`).expect(200);
   expect(body.items).toHaveLength(1);
   expect(body.items[0]).toMatchObject({ createdBy: 'Evenfall', channel: 'deflection' });

@@ -61,7 +61,7 @@ test('earlier nights are those of the rig that were evaluated, by their newest e
   await night(2, []);
   await night(3, [9e-3], { rehearsal: true });
   await night(5, [7e-3]);
-  const found = await nightsBefore(connection, { labId: lab.id, rigId, startedAtUtcMs: eveningUtcMs + 4 * 86_400_000 });
+  const found = await nightsBefore(connection, { labId: lab.id, rigId, massSetId: null, startedAtUtcMs: eveningUtcMs + 4 * 86_400_000 });
   expect(found.map(({ runId, control: empty, reversal_rad }) => [runId, empty, reversal_rad.value])).toEqual([
     [control, true, 0],
     [first, false, 2e-3],

@@ -8,7 +8,7 @@ const live: RigView['live'] = {
   ...{ condition: 'ready', detail: '', lastReplyAt: '2031-03-15T05:53:00.000Z', roundTripMs: 3, discardedLines: 0 },
   ...{ positionKnown: true, angleDeg: 0, moving: false, interlockClosed: true, supplyPresent: true, armKey: false, driversOn: false },
 };
-const quiet = { live, arm: null, locks: [], activeRun: null, document: demoRigWide };
+const quiet = { live, arm: null, arming: null, locks: [], activeRun: null, document: demoRigWide };
 const arm = { id: 'a', name: 'Anna Quell', from: '2031-03-14T20:00:00.000Z', until: '2031-03-15T07:00:00.000Z', note: '' };
 const lock = { id: 'l', userId: 'u', name: 'Bo Fennel', note: '', since: '2031-03-15T05:00:00.000Z' };
 const asked = (changes: Partial<Parameters<typeof mayGoIn>[0]>) => mayGoIn({ ...quiet, ...changes }, 'Europe/Zurich');
@@ -35,6 +35,12 @@ test('no while it moves, while a run is on, held or not, and while it is armed',
   });
   // An arm counts although the controller is not heard: the line may come back.
   expect(asked({ arm, live: { ...live, condition: 'lost' } }).answer).toBe('no');
+});
+
+test('no while somebody is arming it, and while its key is on', () => {
+  const arming = { name: 'Anna Quell', until: arm.until, stage: 'leave' as const, endsAt: '2031-03-15T05:55:00.000Z' };
+  expect(asked({ arming })).toMatchObject({ answer: 'no', words: expect.stringContaining('Anna Quell is arming it') });
+  expect(asked({ live: { ...live, armKey: true } })).toMatchObject({ answer: 'no', words: expect.stringContaining('arm key is on') });
 });
 
 test.each(['closed', 'opening', 'lost', 'refused'] as const)('not known while the line is %s, whatever was heard last', (condition) => {

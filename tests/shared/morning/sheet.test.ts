@@ -1,3 +1,4 @@
+import { alarmKinds } from '@/shared/alarms/catalog';
 import type { ChainedEvent, StepRow } from '@/shared/archive/run-records';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { NARROW_SPACE } from '@/shared/lib/format-number';
@@ -62,7 +63,17 @@ const result: EvaluationResult = {
 };
 
 const night: MorningFacts = {
-  ...{ runId: 'run-1', rig: demoRigWide, startedAtUtcMs: start, endUtcMs: start + 124 * min, rows, events, result, earlier: [] },
+  ...{
+    runId: 'run-1',
+    rig: demoRigWide,
+    startedAtUtcMs: start,
+    endUtcMs: start + 124 * min,
+    rows,
+    events,
+    result,
+    failure: null,
+    earlier: [],
+  },
   plan: { endUtcMs: start + 104 * min, dwells: 4, truncated: false },
   record: { events: 7, brokenAt: null },
   room: [],
@@ -95,6 +106,16 @@ test('an interruption that the run overcame by itself counts from the last word 
   ]);
   const held = [event(1, 60, 'held', { code: 'held-by-person', reason: 'Anna held it.' })];
   expect(morningSheet({ ...night, rows: rows.slice(0, 2), events: held }).lost).toEqual([{ words: 'held by a person', s: 3840 }]);
+});
+
+test('an interruption that a dwell outlived is no time lost beside it', () => {
+  const within = event(5, 120, 'resumed', { by: 'protocol', cause: 'link-lost', gapS: 300 });
+  expect(morningSheet({ ...night, events: [within] }).lost.map(({ words }) => words)).toEqual(['dwells that do not count']);
+});
+
+test('a control has nothing predicted, and is told as one', () => {
+  const control = { ...demoRigWide, sources: { shape: 'none' as const } };
+  expect(tick({ rig: control }, 'first-pair')).toEqual({ code: 'first-pair', ok: null, words: expect.stringMatching(/^A control/) });
 });
 
 test('the five ticks of an ordinary night, each with its figure', () => {
@@ -149,12 +170,26 @@ test('where the geometry has nearly all of u(G), another night is not praised', 
   });
 });
 
+test('what held the run last is to be put right, unless somebody has resumed it; why an evaluation failed is told', () => {
+  const held = morningSheet({ ...night, events: events.slice(0, 5) }).next[0]?.words;
+  expect(held).toBe(alarmKinds.interlock.answer);
+  expect(morningSheet({ ...night, events: events.slice(0, 6) }).next.map(({ words }) => words)).not.toContain(held);
+  const failed = morningSheet({ ...night, result: null, failure: 'channels/spot.csv: no dwell has samples' });
+  expect(failed.next[0]?.words).toMatch(/^The evaluation failed: channels\/spot\.csv: no dwell has samples\./);
+});
+
+test('what shares its error with others is not to be measured alone', () => {
+  const { sources } = demoRigWide;
+  const grouped = { ...demoRigWide, sources: { ...sources, orbit: { ...sources.orbit!, group: 'ruler' } } };
+  expect(morningSheet({ ...night, rig: grouped, events: events.slice(0, 4) }).next.map(({ act }) => act)).toEqual(['go']);
+});
+
 test('faults come first, and half of the dwells lost says wait', () => {
   const lost = rows.map((one) => (one.kind === 'dwell' ? { ...one, outcome: 'done' as const, good: one.seq === 2 } : one));
   const { next } = morningSheet({ ...night, rows: lost, cover: { ...night.cover!, samples: 5_000 } });
-  expect(next.map(({ act }) => act)).toEqual(['first', 'first', 'wait']);
-  expect(next[1]?.words).toMatch(/^50\.0 % of the samples/);
-  expect(next[2]?.words).toMatch(/^3 of 4 dwells do not count, the last for: deflection silent/);
+  expect(next.map(({ act }) => act)).toEqual(['first', 'wait', 'first']);
+  expect(next[0]?.words).toMatch(/^50\.0 % of the samples/);
+  expect(next[1]?.words).toMatch(/^3 of 4 dwells do not count, the last for: deflection silent/);
 });
 
 test('the mail has them in the order in which people ask, each number with its unit and its u', () => {
