@@ -155,6 +155,7 @@ const rolesInWords: Record<Act, string> = {
   'alarm.acknowledge': 'Only an analyst, an operator, a keeper or an owner may acknowledge an alarm.',
   'alarm.shelve': 'Only an operator, a keeper or an owner may shelve or reset an alarm.',
   'data.import': 'Only an analyst, an operator, a keeper or an owner may import data.',
+  'data.annotate': 'Only an analyst, an operator, a keeper or an owner may write notes to the step log.',
   'data.exclude': 'Only an analyst, an operator, a keeper or an owner may exclude data.',
   evaluate: 'Only an analyst, an operator, a keeper or an owner may evaluate a run.',
   read: 'Every member may read.',

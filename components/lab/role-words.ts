@@ -19,6 +19,7 @@ const actWords: Record<Act, string> = {
   'alarm.acknowledge': 'Acknowledge an alarm, and say that its answer is done',
   'alarm.shelve': 'Shelve or reset an alarm',
   'data.import': 'Import data',
+  'data.annotate': 'Write notes to the step log',
   'data.exclude': 'Exclude data with a reason, and withdraw it',
   evaluate: 'Evaluate a run',
   read: 'Read everything',

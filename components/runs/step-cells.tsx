@@ -100,8 +100,8 @@ const outcomeLooks: Record<string, { icon: IconName; tone: Tone }> = {
   failed: { icon: 'failed', tone: 'danger' },
 };
 
-/** How it ended, and how much of its samples is excluded. */
-export function OutcomeCell({ row, excluded }: { row: StepRowView; excluded: string | null }) {
+/** How it ended, how much of its samples is excluded, and how many notes there are to it. */
+export function OutcomeCell({ row, excluded, noted }: { row: StepRowView; excluded: string | null; noted: number }) {
   const look =
     row.good === false
       ? { icon: 'failed' as const, tone: 'danger' as const }
@@ -118,6 +118,12 @@ export function OutcomeCell({ row, excluded }: { row: StepRowView; excluded: str
           <Body size={13} tone="lamp">
             {excluded}
           </Body>
+        </View>
+      )}
+      {noted === 0 ? null : (
+        <View className="flex-row items-center gap-1.5" testID="row-noted">
+          <Icon name="note" size={16} tone="dim" />
+          <Label>{noted === 1 ? '1 note' : `${String(noted)} notes`}</Label>
         </View>
       )}
     </View>

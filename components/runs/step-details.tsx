@@ -8,6 +8,7 @@ import { Button, Label } from '@/components/ui';
 import type { ChainedEvent } from '@/shared/archive/run-records';
 import type { StepRowView } from '@/shared/contracts/runs';
 import { EventList } from './event-list';
+import { RowNotes, type StepNotes } from './step-notes';
 import { eventsOf } from './use-events';
 
 /** From when to when a step went; null while it goes on, and for one without any length. */
@@ -20,14 +21,16 @@ interface StepDetailsProps {
   events: readonly ChainedEvent[];
   timeZone: string;
   exclusions: Exclusions;
+  notes: StepNotes;
 }
 
-/** What an open row of the step log shows: its events, and what of its samples is excluded or was. */
-export function StepDetails({ runId, row, events, timeZone, exclusions }: StepDetailsProps) {
+/** What an open row of the step log shows: its events, what people wrote to it, and what of its samples is excluded or was. */
+export function StepDetails({ runId, row, events, timeZone, exclusions, notes }: StepDetailsProps) {
   const stretch = stretchOf(row);
   return (
     <View className="gap-4">
       <EventList events={eventsOf(events, row)} timeZone={timeZone} />
+      <RowNotes {...notes} runId={runId} seq={row.seq} />
       {stretch === null ? null : <StepExclusions {...{ runId, exclusions, stretch }} seq={row.seq} />}
     </View>
   );

@@ -13,6 +13,7 @@ import { ChainHead } from './event-list';
 import { isOver } from './run-words';
 import { StepDetails, stretchOf } from './step-details';
 import { everything, filterChoices, filterSteps, noFilter, type StepFilter } from './step-filter';
+import { useStepNotes } from './step-notes';
 import { StepCards, StepTable, type StepListProps } from './step-table';
 import { useEvents } from './use-events';
 
@@ -77,6 +78,7 @@ function LoggedSteps({ runId, rows, events, protocol, timeZone, first }: LoggedS
   }, [first]);
   const shown = useMemo(() => filterSteps(rows, filter), [rows, filter]);
   const exclusions = useExclusions(runId);
+  const notes = useStepNotes(runId);
   const list: StepListProps = {
     rows: shown,
     protocol,
@@ -85,7 +87,8 @@ function LoggedSteps({ runId, rows, events, protocol, timeZone, first }: LoggedS
       const stretch = stretchOf(row);
       return stretch === null ? null : excludedPart(exclusions.exclusions, stretch);
     },
-    details: (row) => <StepDetails {...{ runId, row, events, timeZone }} exclusions={exclusions} />,
+    noted: (row) => notes.notes.filter(({ seq }) => seq === row.seq).length,
+    details: (row) => <StepDetails {...{ runId, row, events, timeZone, exclusions, notes }} />,
     open,
     onOpen: setOpen,
   };

@@ -12,6 +12,8 @@ export interface StepListProps {
   base: TimeBase;
   /** How much of the samples of a row is excluded. */
   excluded: (row: StepRowView) => string | null;
+  /** How many notes there are to a row. */
+  noted: (row: StepRowView) => number;
   /** What an open row shows. */
   details: (row: StepRowView) => ReactNode;
   /** Seq of the row that is open. */
@@ -23,7 +25,7 @@ const head = 'py-2 pr-4 text-left font-sans text-13 font-regular text-dim';
 const cell = 'py-2.5 pr-4 align-top';
 
 /** The step log as a table, for wide screens. */
-export function StepTable({ rows, protocol, base, excluded, details, open, onOpen }: StepListProps) {
+export function StepTable({ rows, protocol, base, excluded, noted, details, open, onOpen }: StepListProps) {
   return (
     <table className="w-full border-collapse" data-testid="step-table">
       <thead>
@@ -57,7 +59,7 @@ export function StepTable({ rows, protocol, base, excluded, details, open, onOpe
                 <AngleCell row={row} />
               </td>
               <td className={cell}>
-                <OutcomeCell row={row} excluded={excluded(row)} />
+                <OutcomeCell row={row} excluded={excluded(row)} noted={noted(row)} />
               </td>
               <td className="align-top">
                 <OpenButton seq={row.seq} open={open === row.seq} onOpen={onOpen} />
@@ -79,7 +81,7 @@ export function StepTable({ rows, protocol, base, excluded, details, open, onOpe
 }
 
 /** The step log as cards, for phones. */
-export function StepCards({ rows, protocol, base, excluded, details, open, onOpen }: StepListProps) {
+export function StepCards({ rows, protocol, base, excluded, noted, details, open, onOpen }: StepListProps) {
   return (
     <View className="gap-3" role="list">
       {rows.map((row) => (
@@ -92,7 +94,7 @@ export function StepCards({ rows, protocol, base, excluded, details, open, onOpe
                 </Num>
                 <TitleCell row={row} protocol={protocol} />
               </View>
-              <OutcomeCell row={row} excluded={excluded(row)} />
+              <OutcomeCell row={row} excluded={excluded(row)} noted={noted(row)} />
             </View>
             <View className="gap-2 pl-9">
               <Instant name="start">
@@ -127,7 +129,7 @@ function OpenButton({ seq, open, onOpen }: { seq: number; open: boolean; onOpen:
   return (
     <Pressable
       role="button"
-      aria-label={`${open ? 'Hide' : 'Show'} the events and exclusions of step ${seq}`}
+      aria-label={`${open ? 'Hide' : 'Show'} events, notes and exclusions of step ${seq}`}
       aria-expanded={open}
       onPress={() => onOpen(open ? null : seq)}
       className="min-h-target min-w-target items-center justify-center rounded-action hover:bg-panel2"

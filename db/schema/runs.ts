@@ -93,6 +93,32 @@ export const runEvents = pgTable(
   ],
 );
 
+/** What people wrote to rows of the step log. Rows are only ever added: a trigger refuses all else. */
+export const stepNotes = pgTable(
+  'step_notes',
+  {
+    labId: key('lab_id').notNull(),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
+    runId: key('run_id').notNull(),
+    /** Row of the step log. */
+    seq: integer('seq').notNull(),
+    text: text('text').notNull(),
+    writtenAt: instant('written_at').notNull(),
+    writtenBy: text('written_by').notNull(),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.id] }),
+    foreignKey({
+      name: 'step_notes_step_fk',
+      columns: [table.labId, table.runId, table.seq],
+      foreignColumns: [runSteps.labId, runSteps.runId, runSteps.seq],
+    }),
+    index('step_notes_run').on(table.labId, table.runId, table.seq, table.writtenAt),
+  ],
+);
+
 /** The step log. */
 export const runSteps = pgTable(
   'run_steps',

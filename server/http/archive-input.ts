@@ -3,6 +3,7 @@ import type { ChannelSeries } from '@/shared/archive/run-records';
 import { findFrozenEvaluation, type ListedRecord } from '../store/evaluations';
 import { exclusionsInForce } from '../store/exclusions';
 import { channelsOfRun, countSamples, readEvents, readSteps, type RunRecord } from '../store/runs-read';
+import { stepNotesOf } from '../store/step-notes';
 import { isoOf } from './maker';
 import { ProblemError } from './problem-error';
 import { softwareVersion } from './software';
@@ -46,6 +47,13 @@ async function exclusionsAt(services: Services, { labId, id }: RunRecord, utcMs:
   return { exclusions: rows.map(({ startUtcMs, endUtcMs, reason }) => ({ startUtcMs, endUtcMs, reason })) };
 }
 
+/** What was written to the step log; undefined where nothing was, so that the archive has no file of it. */
+async function notesOf(services: Services, { labId, id }: RunRecord): Promise<Pick<BuildArchiveInput, 'notes'>> {
+  const rows = await stepNotesOf(services.database.db, { labId, runId: id });
+  if (rows.length === 0) return {};
+  return { notes: rows.map(({ seq, writtenAt, writtenBy, text }) => ({ seq, atUtcMs: writtenAt, by: writtenBy, text })) };
+}
+
 /**
  * Everything of an ended run, as the archive wants it. Exclusions are those in force at `exclusionsAtUtcMs`; without it
  * those of the frozen evaluation, so that the archive gives its numbers again, or, where none is frozen, those of now.
@@ -72,6 +80,7 @@ export async function archiveInputOf(services: Services, run: RunRecord, exclusi
     events: await readEvents(db, { labId: run.labId, runId: run.id }, { afterSeq: 0 }),
     channels: await seriesOf(services, run),
     ...(await exclusionsAt(services, run, exclusionsAtUtcMs ?? frozen?.createdAt ?? nowUtcMs)),
+    ...(await notesOf(services, run)),
     evaluation: frozenOf(frozen),
     createdAt: isoOf(nowUtcMs),
     software: `Evenfall ${softwareVersion}`,

@@ -1,4 +1,5 @@
 import { exclusionColumns } from './exclusions';
+import { noteColumns } from './notes';
 import { addedStepColumns, stepColumns } from './step-csv';
 
 /** Frictionless Table Schemas of the archive's CSV files; units stand in the descriptions. */
@@ -65,3 +66,12 @@ const exclusionFields: Record<(typeof exclusionColumns)[number], TableField> = {
 };
 
 export const exclusionsSchema: TableSchema = { fields: exclusionColumns.map((name) => exclusionFields[name]) };
+
+const noteFields: Record<(typeof noteColumns)[number], TableField> = {
+  seq: { name: 'seq', type: 'integer', description: 'row of steps.csv that the note is about' },
+  at_utc: instant('at_utc', 'when it was written'),
+  by: { name: 'by', type: 'string', description: 'who wrote it' },
+  text: { name: 'text', type: 'string', description: 'the note' },
+};
+
+export const notesSchema: TableSchema = { fields: noteColumns.map((name) => noteFields[name]) };

@@ -18,6 +18,7 @@ import * as runs from './runs';
 import * as schedules from './schedules';
 import * as service from './service';
 import * as standing from './standing';
+import * as stepNotes from './step-notes';
 import * as work from './work';
 
 const isRoute = (value: unknown): value is RouteContract =>
@@ -41,6 +42,7 @@ export const routes: readonly RouteContract[] = [
   data,
   devices,
   exclusions,
+  stepNotes,
   evaluations,
   work,
   alarms,

@@ -25,6 +25,7 @@ export const acts = {
   'alarm.acknowledge': upTo('analyst'),
   'alarm.shelve': upTo('operator'),
   'data.import': upTo('analyst'),
+  'data.annotate': upTo('analyst'),
   'data.exclude': upTo('analyst'),
   evaluate: upTo('analyst'),
   read: all,

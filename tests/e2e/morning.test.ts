@@ -118,6 +118,20 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     );
   });
 
+  chapter('a row is annotated, and says so', async () => {
+    const row = hand.page.getByTestId('step-row').nth(1);
+    await hand.taps('events-2');
+    await hand.types('note-text', `the lamp flickered, ${size}`);
+    await hand.taps('note-send');
+    await row
+      .getByTestId('row-noted')
+      .getByText(size === 'phone' ? '1 note' : '2 notes')
+      .waitFor();
+    await hand.reads('row-notes', new RegExp(`the lamp flickered, ${size}.*by Tam Ferrowdale`));
+    expect(await hand.at('note-text').inputValue()).toBe('');
+    await hand.shoots('note');
+  });
+
   chapter('a dwell is excluded with a reason, from when to when, is hatched on the data page, and is withdrawn again', async () => {
     const { items } = (await read(lab(), `${runId}/steps`)) as { items: StepRowView[] };
     const seq = items.find(({ kind }) => kind === 'dwell')?.seq ?? 0;

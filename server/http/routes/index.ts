@@ -17,6 +17,7 @@ import { rigRoutes } from './rigs';
 import { runRoutes } from './runs';
 import { scheduleRoutes } from './schedules';
 import { serviceRoutes } from './service';
+import { stepNoteRoutes } from './step-notes';
 import { workRoutes } from './work';
 
 /** Every route of the API with the function that answers it. */
@@ -36,6 +37,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...dataRoutes,
   ...deviceRoutes,
   ...exclusionRoutes,
+  ...stepNoteRoutes,
   ...evaluationRoutes,
   ...workRoutes,
   ...alarmRoutes,

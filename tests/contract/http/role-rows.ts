@@ -185,6 +185,8 @@ export const rows: Readonly<Record<string, Row>> = {
     body: () => ({ reason: 'the door was shut' }),
     allowed: 404,
   },
+  listStepNotes: { params: run, allowed: 200 },
+  writeStepNote: { params: run, body: () => ({ seq: 999_999, text: 'a lorry' }), allowed: 404 },
   startEvaluation: { params: run, body: () => ({ channel: 'no such channel' }), allowed: 422 },
   listEvaluations: { params: run, allowed: 200 },
   listGivenUpJobs: { params: lab, allowed: 200 },

@@ -163,6 +163,24 @@ test('what cannot be excluded is refused with what would be right; who excluded 
   expect(entries.map(({ kind }) => kind)).toEqual(['run.exclusion-withdrawn', 'run.data-excluded']);
 });
 
+test('a note to a row of the step log stays with name and time, in the archive too; it needs a row and some words', async () => {
+  const run = await rehearse({ protocolId: await lab.issue(quickProtocol()), seed: 7 });
+  const at = `${labPath}/runs/${run.id}/notes`;
+  expect((await archiveOf(run.id)).has('notes.csv')).toBe(false);
+  const writes = (body: object) => lab.as('analyst', 'POST', at).send({ seq: 3, text: 'a lorry, then "quiet"', ...body });
+  await writes({ text: ' ' }).expect(400);
+  expect((await writes({ seq: 99 }).expect(404)).body.detail).toMatch(/row of the step log/);
+  const { body: note } = await writes({}).expect(201);
+  expect(note).toMatchObject({ seq: 3, text: 'a lorry, then "quiet"', by: 'Tam Ferrowdale' });
+  expect((await lab.as('viewer', 'GET', at).expect(200)).body.items).toEqual([note]);
+  const { pool } = database().connection;
+  await expect(pool.query('update step_notes set text = $1', ['nothing'])).rejects.toThrow(/never changed/);
+  const csv = new TextDecoder().decode((await archiveOf(run.id)).get('notes.csv'));
+  expect(csv).toMatch(/^seq,at_utc,by,text\n3,2\S+Z,Tam Ferrowdale,"a lorry, then ""quiet"""\n$/);
+  const audit = await lab.as('owner', 'GET', `${labPath}/audit?kind=run.step-noted`).expect(200);
+  expect(audit.body.items[0].data).toMatchObject({ runId: run.id, noteId: note.id, seq: 3 });
+});
+
 test('a run whose data cannot give a result says why', async () => {
   const protocolId = await lab.issue({ formatVersion: 1, name: 'Still', steps: [{ kind: 'home' }, { kind: 'settle', for_s: 60 }] });
   const run = await rehearse({ protocolId });

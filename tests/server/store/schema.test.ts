@@ -25,9 +25,12 @@ test('timestamps before 1970 and with other offsets are read right', () => {
   expect(instant).toBeDefined();
 });
 
-test.each(['rig_revisions', 'protocol_revisions', 'run_events', 'audit', 'exclusions'])('%s refuses TRUNCATE', async (table) => {
-  await expect(run(`truncate ${table} cascade`)).rejects.toThrow('never changed or deleted');
-});
+test.each(['rig_revisions', 'protocol_revisions', 'run_events', 'audit', 'exclusions', 'step_notes'])(
+  '%s refuses TRUNCATE',
+  async (table) => {
+    await expect(run(`truncate ${table} cascade`)).rejects.toThrow('never changed or deleted');
+  },
+);
 
 test('an audit row can be neither changed nor deleted', async () => {
   const [lab] = await database().connection.db.select().from(schema.labs).limit(1);
