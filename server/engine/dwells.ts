@@ -35,6 +35,12 @@ export function holdOfDwells({ context }: Draft): { code: string; text: string; 
   if (last === undefined) return null;
   if (last.noResponse !== null)
     return { code: 'no-response', seq: last.seq, text: `In the dwell of row ${last.seq} ${last.noResponse}. It may touch, or be caged.` };
+  if (last.excursion !== null)
+    return {
+      code: 'excursion',
+      seq: last.seq,
+      text: `In the dwell of row ${last.seq} ${last.excursion}. The sources stay where they are: look at the strip, and resume when it has decayed.`,
+    };
   const silent = since.slice(-MOST_SILENT);
   if (silent.length < MOST_SILENT || !silent.every((dwell) => dwell.silent)) return null;
   const text = `The deflection was silent in ${MOST_SILENT} dwells one after the other. Look at laser, camera and the computer that records, then resume.`;

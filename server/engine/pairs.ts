@@ -28,9 +28,14 @@ export function noteDwellDone(draft: Draft, row: StepRow): void {
   const { pass, mate, broken } = pairFor(draft.context, row.path);
   draft.context.pair = { pass, mate: mate !== null || broken ? null : structuredClone(row), broken: false };
   if (!broken) return;
+  if (row.good === true) noteUnpaired(draft.context);
   row.good = false;
   draft.log('dwell-not-good', { seq: row.seq, path: row.path, why: whyNotGood });
 }
+
+const noteUnpaired = (context: Pick<RunContext, 'dwellsUnpaired'>) => {
+  context.dwellsUnpaired = (context.dwellsUnpaired ?? 0) + 1;
+};
 
 /** The dwell that would be left without its pair if this row's were skipped; null where there is none yet. */
 export const mateOf = (context: Pick<RunContext, 'pair'>, row: Pick<StepRow, 'kind' | 'path'>): StepRow | null =>
@@ -45,6 +50,7 @@ export function breakPair(draft: Draft, row: StepRow): void {
   for (const kept of context.position.dwells) if (kept.seq === mate.seq) kept.good = false;
   if (context.dwells.some(({ seq, good }) => seq === mate.seq && !good)) return;
   context.dwellsGood -= 1;
+  noteUnpaired(context);
   context.dwells = context.dwells.map((dwell) => (dwell.seq === mate.seq ? { ...dwell, good: false } : dwell));
   draft.saveRow({ ...mate, good: false });
   draft.log('dwell-not-good', { seq: mate.seq, path: mate.path, why: whyNotGood });

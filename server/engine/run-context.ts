@@ -148,6 +148,8 @@ export interface RunContext {
   dwellsDone: number;
   /** Of these, the good ones. */
   dwellsGood: number;
+  /** Of these, good by themselves, but the other of their pair was skipped; absent: none. */
+  dwellsUnpaired?: number;
   /** What was measured in the dwells that were judged, the last ones: near minus far so far comes from them. */
   dwells: DwellFacts[];
   /** Sequence number of the dwell that is being judged, or was last. */

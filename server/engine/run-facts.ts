@@ -29,6 +29,8 @@ export interface RunFacts {
   dwellsPlanned: number;
   holdAfterDwell: boolean;
   dwellsGood: number;
+  /** Dwells that are done and not good for no other reason than that somebody skipped the other of their pair. */
+  dwellsUnpaired: number;
   waiting: WaitingFacts | null;
   /** Near minus far so far; null before there is a reversal. */
   reversal: ReversalSoFar | null;
@@ -147,6 +149,7 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, pre
     dwellsPlanned,
     holdAfterDwell: context.holdAfterStep !== null,
     dwellsGood: context.dwellsGood,
+    dwellsUnpaired: context.dwellsUnpaired ?? 0,
     waiting: waitingFacts(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy }),
     reversal: reversalSoFar(context.dwells),
     loud: context.dwells.at(-1)?.loud ?? null,

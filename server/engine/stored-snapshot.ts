@@ -35,7 +35,7 @@ type Newer =
   | 'waiting';
 type OldContext = Omit<RunContext, Newer> & Partial<Pick<RunContext, Newer>>;
 
-const unjudged = { silent: false, noResponse: null, loud: null };
+const unjudged = { silent: false, noResponse: null, excursion: null, loud: null };
 
 /** A snapshot of this or an older version in the shape of this one; null where this version cannot read it. */
 export function restored(snapshot: unknown, chartVersion: number): RunSnapshot | null {

@@ -140,6 +140,7 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
     dwellsPlanned,
     holdAfterDwell: false,
     dwellsGood: steps.filter((step) => step.kind === 'dwell' && step.outcome === 'done' && step.good !== false).length,
+    dwellsUnpaired: 0,
     waiting: null,
     reversal: null,
     loud: null,

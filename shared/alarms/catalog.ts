@@ -116,9 +116,9 @@ const kinds = {
     onDelayS: 600,
     offDelayS: 60,
     title: 'Pendulum near its limit',
-    cause: 'The deflection has been beyond 90 % of the clearance or of the range of the readout for 10 min.',
-    consequence: 'The pendulum may touch, or leave the scale; the night would be lost.',
-    answer: 'Hold after this dwell. Look at the strip: a knock decays, a drift does not.',
+    cause: 'The deflection has been beyond 90 % of the clearance or of the range of the readout for a period or longer.',
+    consequence: 'The pendulum may touch, or leave the scale. At the end of a dwell of which that is true the run holds: no swing follows.',
+    answer: 'Look at the strip: a knock decays, a drift does not. Resume when it has decayed.',
   },
   held: {
     ...always,

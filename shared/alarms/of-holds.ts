@@ -12,6 +12,7 @@ const byReason: Readonly<Record<string, AlarmCode>> = {
   'slip-found-homing': 'home-edge',
   'no-response': 'no-response',
   'no-deflection': 'no-deflection',
+  excursion: 'excursion',
 };
 const byPeople = ['held-by-person', 'stopped-by-person', 'hold-after-dwell'];
 

@@ -25,6 +25,8 @@ export interface DwellFacts {
   silent: boolean;
   /** In a sentence, that the pendulum did not answer the swing before it; null where it did, or where that cannot be told. */
   noResponse: string | null;
+  /** In a sentence, that it swings out too far for another swing of the sources; null where it does not, or where that cannot be told. */
+  excursion: string | null;
   /** Noise about the fit that is too much for an ordinary night, and since when, UTC ms; null where it is not. */
   loud: { words: string; sinceUtcMs: number } | null;
 }
@@ -75,6 +77,7 @@ export function judgeDwell(look: DwellLook): DwellFacts {
     why,
     silent: silent.length > 0,
     noResponse: noResponse(look, swing),
+    excursion: excursion(look, swing),
     loud: loud(look, swing),
   };
 }
@@ -159,6 +162,28 @@ function noResponse(
   const movedRad = before?.centreRad == null ? null : swing.centreRad - before.centreRad;
   if (movedRad !== null && Math.abs(movedRad - (toRad - fromRad)) <= AS_PLANNED * plannedRad) return null;
   return `the pendulum did not answer the swing: it swings by ${micro(foundRad)} µrad, about ${micro(plannedRad)} µrad were to be expected`;
+}
+
+/** From here on the pendulum is near its stops or the end of its scale (common practice, no source). */
+export const NEAR_LIMIT = 0.9;
+
+/** How far the pendulum may swing to either side of rest before it touches or leaves the readout, rad; null where the rig document tells neither. */
+export function swingRoomRad({ pendulum, readout }: RigDocument): number | null {
+  const ranges = [pendulum.travel_rad, readout?.range_rad].filter((range) => range !== undefined);
+  return ranges.length === 0 ? null : Math.min(...ranges);
+}
+
+/**
+ * What it still swings by when a dwell of a period or more has ended, about where the sources pull it to: the fit knows nothing of short knocks, and
+ * what it finds has lasted for the whole dwell.
+ */
+function excursion({ rig, angleDeg, fromUtcMs, toUtcMs }: DwellLook, swing: FreeSwing | null): string | null {
+  const roomRad = swingRoomRad(rig);
+  const periodS = pendulumOf(rig)?.oscillator.periodS;
+  if (swing === null || roomRad === null || periodS === undefined || toUtcMs - fromUtcMs < 1000 * periodS) return null;
+  const reachRad = Math.abs(predictEquilibriumRad(rig, angleDeg) ?? 0) + swing.amplitudeRad;
+  if (reachRad < NEAR_LIMIT * roomRad) return null;
+  return `the pendulum still swings out to ${micro(reachRad)} µrad at the end, and ${micro(roomRad)} µrad are all that it has`;
 }
 
 function surroundings(look: DwellLook): string[] {

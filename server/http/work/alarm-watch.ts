@@ -175,23 +175,27 @@ export class AlarmWatch {
       const active = services.activeRuns.find(rig.labId, facts.runId);
       const { timeZone = 'UTC' } = active?.run.start ?? {};
       slow.push(...(await lateCondition(db, facts, { labId: rig.labId, rigId: rig.id, timeZone })));
-      const channel = services.stations.get(rig.id)?.channel ?? null;
+      const station = services.stations.get(rig.id);
+      const channel = station === null ? null : await this.deflectionOf(rig.labId, facts.runId, station);
       if (channel !== null) slow.push(...(await excursionCondition(db, rig, { channel, utcMs, runId: facts.runId })));
     }
     known.slow = slow;
   }
 
   private async deflectionUtcMs(labId: string, runId: string | null, station: RigStation): Promise<number | null> {
+    const channel = runId === null ? null : await this.deflectionOf(labId, runId, station);
+    return channel === null ? null : lastSampleUtcMs(this.parts.services.database, { labId, channelId: channel.id });
+  }
+
+  /** The channel that the run is to be evaluated by, of the rig itself or of a device; null where that is not clear. */
+  private async deflectionOf(labId: string, runId: string, station: RigStation): Promise<RigStation['channel']> {
     const { services } = this.parts;
-    if (runId === null) return null;
-    const { database } = services;
-    if (station.channel !== null) return lastSampleUtcMs(database, { labId, channelId: station.channel.id });
+    if (station.channel !== null) return station.channel;
     const run = services.activeRuns.find(labId, runId)?.run;
     if (run === undefined) return null;
     const wanted = run.start.protocol.evaluation?.channel;
-    const channels = (await channelsOfRun(database.db, run)).filter(({ role }) => role === 'deflection');
-    const channel = channels.find(({ name }) => name === wanted) ?? (channels.length === 1 ? channels[0] : undefined);
-    return channel === undefined ? null : lastSampleUtcMs(database, { labId, channelId: channel.id });
+    const channels = (await channelsOfRun(services.database.db, run)).filter(({ role }) => role === 'deflection');
+    return channels.find(({ name }) => name === wanted) ?? (channels.length === 1 ? (channels[0] ?? null) : null);
   }
 
   private async lookAtDisk(labIds: readonly string[]): Promise<void> {

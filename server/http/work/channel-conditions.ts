@@ -1,6 +1,11 @@
 import { passesLimit } from '@/shared/alarms/limits';
+import { NEAR_LIMIT, swingRoomRad } from '@/shared/conditions/dwell-verdict';
+import { UnusableArchive } from '@/shared/archive/unusable-archive';
+import { scaleOf, toRad, type ChannelScale } from '@/shared/evaluation/channel-scale';
+import type { RigDocument } from '@/shared/rig/document';
+import type { RoomHours } from '@/shared/schedule/plan';
 import { againstRoom } from '@/shared/schedule/room';
-import { channelNow, type LimitRecord } from '../../store/channel-limits';
+import { channelNow, type ChannelState, type LimitRecord } from '../../store/channel-limits';
 import type { Database } from '../../store/database';
 import type { RigRecord } from '../../store/rigs';
 import { hoursOfRoom } from '../../store/schedules';
@@ -37,34 +42,63 @@ export async function limitConditions(
 /** Whether the run that began within the night window will pass its end. */
 export async function lateCondition(
   db: Database,
-  { runId, startedAtUtcMs, predictedEndUtcMs }: RunFacts,
+  facts: RunFacts,
   { timeZone, ...rig }: { labId: string; rigId: string; timeZone: string },
 ): Promise<Condition[]> {
-  if (startedAtUtcMs === null || predictedEndUtcMs === null) return [];
-  const hours = await hoursOfRoom(db, rig);
-  const beginning = againstRoom(hours, { startUtcMs: startedAtUtcMs, endUtcMs: startedAtUtcMs + 1 }, timeZone);
-  const whole = againstRoom(hours, { startUtcMs: startedAtUtcMs, endUtcMs: predictedEndUtcMs }, timeZone);
-  return beginning === null && whole !== null ? [{ code: 'late-finish', subject: '', words: whole, runId }] : [];
+  const words = lateWords(facts, { hours: await hoursOfRoom(db, rig), timeZone });
+  return words === null ? [] : [{ code: 'late-finish', subject: '', words, runId: facts.runId }];
 }
 
-const ofExcursion = 0.9;
-const radOf: Readonly<Record<string, number>> = { rad: 1, mrad: 1e-3, urad: 1e-6 };
+/** Where a run begins within the hours of its room and is to end outside of them: in words; else null. */
+export function lateWords(
+  { startedAtUtcMs, predictedEndUtcMs }: Pick<RunFacts, 'startedAtUtcMs' | 'predictedEndUtcMs'>,
+  { hours, timeZone }: { hours: RoomHours; timeZone: string },
+): string | null {
+  if (startedAtUtcMs === null || predictedEndUtcMs === null) return null;
+  const beginning = againstRoom(hours, { startUtcMs: startedAtUtcMs, endUtcMs: startedAtUtcMs + 1 }, timeZone);
+  return beginning === null ? againstRoom(hours, { startUtcMs: startedAtUtcMs, endUtcMs: predictedEndUtcMs }, timeZone) : null;
+}
 
 /** The pendulum beyond 90 % of its clearance or of the range of its readout, about its mean over the last four periods. */
 export async function excursionCondition(
   db: Database,
   { document, labId }: RigRecord,
-  { channel, utcMs, runId }: { channel: { id: string; unit: string }; utcMs: number; runId: string },
+  { channel, utcMs, runId }: { channel: Deflection & { id: string }; utcMs: number; runId: string },
 ): Promise<Condition[]> {
   const period = document.measured?.period_s?.value;
-  const ranges = [document.pendulum.travel_rad, document.readout?.range_rad].filter((range) => range !== undefined);
-  const factor = radOf[channel.unit];
-  if (period === undefined || ranges.length === 0 || factor === undefined) return [];
-  const leastRange = Math.min(...ranges);
+  if (period === undefined || swingRoomRad(document) === null) return [];
   const { extremes } = await channelNow(db, { labId, channelId: channel.id }, { utcMs, windowMs: 4000 * period, recentMs: 1000 * period });
-  if (extremes === null) return [];
-  const reach = factor * Math.max(extremes.greatest - extremes.mean, extremes.mean - extremes.least);
-  if (reach < ofExcursion * leastRange) return [];
-  const words = `The deflection reaches ${String(Math.round(reach * 1e6))} µrad of ${String(Math.round(leastRange * 1e6))} µrad.`;
-  return [{ code: 'excursion', subject: '', words, runId, onDelayS: Math.round(period) }];
+  const words = extremes === null ? null : excursionWords(document, channel, extremes);
+  return words === null ? [] : [{ code: 'excursion', subject: '', words, runId, onDelayS: Math.round(period) }];
+}
+
+interface Deflection {
+  name: string;
+  unit: string;
+}
+
+/** Whether readings that lie so far apart are too near to the ends, in words; null where they are not, or where the rig document does not tell. */
+export function excursionWords(
+  document: RigDocument,
+  channel: Deflection,
+  { mean, least, greatest }: NonNullable<ChannelState['extremes']>,
+): string | null {
+  const roomRad = swingRoomRad(document);
+  const scale = scaleIfTold(channel, document);
+  if (roomRad === null || scale === null) return null;
+  const [middleRad, ...endsRad] = [mean, least, greatest].map((reading) => toRad(scale, reading)) as [number, number, number];
+  // A spot on a scale may count either way.
+  const reachRad = Math.max(...endsRad.map((rad) => Math.abs(rad - middleRad)));
+  if (reachRad < NEAR_LIMIT * roomRad) return null;
+  return `The deflection reaches ${String(Math.round(reachRad * 1e6))} µrad of ${String(Math.round(roomRad * 1e6))} µrad.`;
+}
+
+/** Null where the rig document has no lever for a scale in metres. */
+function scaleIfTold({ name, unit }: Deflection, document: RigDocument): ChannelScale | null {
+  try {
+    return scaleOf({ name, unit, quantity: '', role: 'deflection' }, document);
+  } catch (error) {
+    if (error instanceof UnusableArchive) return null;
+    throw error;
+  }
 }

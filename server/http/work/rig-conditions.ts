@@ -24,6 +24,7 @@ interface RunNow {
   startedUtcMs: number | null;
   /** The last dwell was noisier than an ordinary night's; null where it was not. */
   loud: { words: string; sinceUtcMs: number } | null;
+  /** Those whose other one of the pair somebody skipped are not counted as done: nobody need be told of what was done on purpose. */
   dwells: { done: number; good: number; planned: number };
   /** Of the pendulum, s; null where it is not measured. */
   periodS: number | null;
@@ -34,7 +35,7 @@ export const runNowOf = (
   periodS: number | null,
 ): RunNow => ({
   ...{ id: runId, state, reason, reasonCode, startedUtcMs: startedAtUtcMs, loud, periodS },
-  dwells: { done: facts.dwellsDone, good: facts.dwellsGood, planned: facts.dwellsPlanned },
+  dwells: { done: facts.dwellsDone - facts.dwellsUnpaired, good: facts.dwellsGood, planned: facts.dwellsPlanned },
 });
 
 /** What is seen of a rig at one moment. */
@@ -69,7 +70,8 @@ export function conditionsOf(now: RigNow): Condition[] {
   };
   if (run !== null && atRest.includes(run.state)) {
     const code = alarmOfHold(run.reasonCode);
-    if (code !== null) add(code, run.reason);
+    // What held the run has lasted for as long as it had to.
+    if (code !== null) found.push({ code, subject: '', words: run.reason, runId, onDelayS: 0 });
   }
   if (open.interlock) add('interlock', 'The interlock was opened while the rig was armed. Close it and arm the rig again on site.');
   if (open.supply) add('supply', 'The motor supply was lost while the rig was armed; the position is lost with it.');

@@ -3,7 +3,7 @@ import { predictEquilibriumRad } from '@/shared/protocol/predict';
 import { type Bench, brief, makeBench, runStart, startUtcMs } from './rig-bench';
 import { readerOf } from './signals';
 
-/** Dwells after which the run holds by itself: two without deflection, one after a swing that the pendulum did not answer. */
+/** Dwells after which the run holds by itself: two without deflection, one after a swing that the pendulum did not answer, one that ends near the stops. */
 
 const T = 420;
 const start = (steps: Step[]) => runStart({ formatVersion: 1, name: 'Bad dwells', steps } satisfies ProtocolDocument);
@@ -79,4 +79,23 @@ test('one that answers goes on to the end', async () => {
   const bench = await running(answering);
   await bench.pass(9 * T + 200);
   expect(facts(bench).state).toBe('finished');
+});
+
+test('a pendulum that still swings out to nine tenths of its room at the end of a dwell holds the run: no next swing; a short knock does not', async () => {
+  // The demo rig's readout ends at 30 mrad.
+  const swinging = (amplitudeRad: number) => (tS: number, one: Bench) =>
+    answering(tS, one) + amplitudeRad * Math.sin((2 * Math.PI * tS) / T);
+  const bench = await running(swinging(27e-3));
+  await bench.pass(2 * T + 30);
+  expect(facts(bench)).toMatchObject({ state: 'held', reasonCode: 'excursion' });
+  expect(facts(bench).reason).toMatch(/still swings out to (2[7-9]|3\d)\d{3} µrad at the end, and 30000 µrad.*stay where they are/);
+  expect(brief(bench).at(-1)).toBe('dwell done');
+  expect(bench.link.motions).toHaveLength(2);
+  expect(await bench.driver.resume('Ben')).toMatchObject({ ok: true });
+  await bench.pass(30);
+  expect(brief(bench).at(-1)).toBe('dwell null');
+
+  const knocked = await running((tS, one) => answering(tS, one) + (tS > 300 && tS < 320 ? 29e-3 : 0));
+  await knocked.pass(2 * T + 60);
+  expect(facts(knocked).state).toBe('running');
 });

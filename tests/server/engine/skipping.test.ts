@@ -28,7 +28,7 @@ describe('skipping a dwell', () => {
     });
     expect(await skip(bench)).toMatchObject({ ok: true, serverAtUtcMs: nowUtcMs });
     await bench.pass(6000);
-    expect(bench.driver.facts()).toMatchObject({ state: 'finished', dwellsDone: 5 });
+    expect(bench.driver.facts()).toMatchObject({ state: 'finished', dwellsDone: 5, dwellsGood: 4, dwellsUnpaired: 1 });
     expect(goods(bench)).toEqual([
       '[1].2.dwell done false',
       '[1].4.dwell skipped false',
@@ -54,6 +54,7 @@ describe('skipping a dwell', () => {
     expect(plan?.leftS).toBeGreaterThan(700);
     await skip(bench);
     await bench.pass(6000);
+    expect(bench.driver.facts()).toMatchObject({ dwellsDone: 5, dwellsGood: 4, dwellsUnpaired: 1 });
     expect(goods(bench)).toEqual([
       '[1].2.dwell done true',
       '[1].4.dwell done true',

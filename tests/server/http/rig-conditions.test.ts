@@ -1,4 +1,10 @@
-import { conditionsOf, type RigNow } from '@/server/http/work/rig-conditions';
+import { readFileSync } from 'node:fs';
+import { join } from 'node:path';
+import type { RunFacts } from '@/server/engine/run-facts';
+import { excursionWords, lateWords } from '@/server/http/work/channel-conditions';
+import { conditionsOf, runNowOf, type RigNow } from '@/server/http/work/rig-conditions';
+import { alarmCodes, alarmKinds, type AlarmCode, type Ringing } from '@/shared/alarms/catalog';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
 
 /** What is seen of a rig, and what alarms it gives cause for. */
 
@@ -29,13 +35,39 @@ test('a rig at rest gives cause for none', () => {
   expect(codesOf({ run: running })).toEqual([]);
 });
 
-test('a held run is the alarm of its reason; a hold that a person asked for is none', () => {
-  const held = (reasonCode: string) => codesOf({ run: { ...running, state: 'held', reasonCode, reason: 'Why.' } });
-  expect(
-    ['held-by-person', 'interlock', 'table-slipped', 'proof-failed', 'database-away', 'arm-ended', 'no-response', 'no-deflection'].map(
-      held,
-    ),
-  ).toEqual([...[[], ['interlock'], ['home-edge'], ['proof-failed'], ['held'], ['held'], ['no-response'], ['no-deflection']]]);
+/** What holds a run, the alarm that this is, and whom it rings at night (the table of the trade, no source). */
+test.each<[string, AlarmCode, Ringing]>([
+  ['unexpected-motion', 'unexpected-motion', 'always'],
+  ['stopped-at-rig', 'unexpected-motion', 'always'],
+  ['limit', 'limit', 'always'],
+  ['interlock', 'interlock', 'always'],
+  ['supply', 'supply', 'always'],
+  ['controller-reset', 'controller-reset', 'always'],
+  ['proof-failed', 'proof-failed', 'always'],
+  ['table-slipped', 'home-edge', 'always'],
+  ['slip-found-homing', 'home-edge', 'always'],
+  ['no-deflection', 'no-deflection', 'always'],
+  ['no-response', 'no-response', 'always'],
+  ['excursion', 'excursion', 'always'],
+  ['link-lost', 'held', 'always'],
+  ['database-away', 'held', 'always'],
+  ['server-restarted', 'held', 'always'],
+  ['arm-ended', 'held', 'always'],
+])('held for %s: the alarm %s, which rings %s and at once', (reasonCode, code, rings) => {
+  const found = conditionsOf({ ...quiet, run: { ...running, state: 'held', reasonCode, reason: 'Why.' } });
+  expect(found).toEqual([{ code, subject: '', words: 'Why.', runId: 'run', onDelayS: 0 }]);
+  expect(alarmKinds[code].rings).toBe(rings);
+});
+
+test.each(['held-by-person', 'hold-after-dwell', 'stopped-by-person'])('%s is no alarm', (reasonCode) => {
+  expect(codesOf({ run: { ...running, state: 'held', reasonCode } })).toEqual([]);
+});
+
+test('a run that cannot be carried on blocks its rig, and says so', () => {
+  const quarantined = { runId: 'old', why: 'Another version wrote it.' };
+  expect(conditionsOf({ ...quiet, quarantined })).toEqual([
+    { code: 'not-taken-up', subject: '', words: 'Another version wrote it.', runId: 'old' },
+  ]);
 });
 
 test('the interlock that voided the arm is told once, with or without a run', () => {
@@ -75,4 +107,53 @@ test.each([
 ])('few good dwells: %s', (_, dwells, words) => {
   const found = conditionsOf({ ...quiet, run: { ...running, dwells } });
   expect(found).toEqual(words === null ? [] : [expect.objectContaining({ code: 'few-good', words, runId: 'run' })]);
+});
+
+test('a dwell whose other of the pair was skipped by somebody is not held against the night', () => {
+  const facts = { dwellsDone: 5, dwellsGood: 2, dwellsUnpaired: 0, dwellsPlanned: 8, state: 'running', loud: null } as unknown as RunFacts;
+  const codes = (change: Partial<RunFacts>) =>
+    conditionsOf({ ...quiet, run: runNowOf({ ...facts, ...change }, 420) }).map(({ code }) => code);
+  expect(codes({})).toEqual(['few-good']);
+  expect(codes({ dwellsUnpaired: 1 })).toEqual([]);
+});
+
+describe('the pendulum near its ends', () => {
+  const words = (unit: string, extremes: { mean: number; least: number; greatest: number }, rig = demoRigWide) =>
+    excursionWords(rig, { name: 'spot', unit }, extremes);
+
+  test('in angles, from nine tenths of the nearer of clearance and range on', () => {
+    expect(words('urad', { mean: 1000, least: -25_900, greatest: 2000 })).toBeNull();
+    expect(words('urad', { mean: 1000, least: -26_100, greatest: 2000 })).toBe('The deflection reaches 27100 µrad of 30000 µrad.');
+    expect(words('mrad', { mean: 1, least: 0, greatest: 28.1 })).toBe('The deflection reaches 27100 µrad of 30000 µrad.');
+  });
+
+  test('on the scale of a device, whichever way it counts; nothing is said without a lever, or where the rig tells no ends', () => {
+    const { distance, fold } = demoRigWide.lever ?? { distance: { value: 0 }, fold: 0 };
+    const mm = 1000 * distance.value * Math.tan(fold * 0.0275);
+    expect(words('mm', { mean: 0, least: -mm, greatest: 5 })).toMatch(/reaches 27\d{3} µrad/);
+    expect(words('mm', { mean: 0, least: -5, greatest: mm })).toMatch(/reaches 27\d{3} µrad/);
+    const { lever: _, ...bare } = demoRigWide;
+    expect(words('mm', { mean: 0, least: -mm, greatest: 5 }, bare)).toBeNull();
+    const { readout: __, ...noRange } = demoRigWide;
+    const { travel_rad: ___, ...pendulum } = demoRigWide.pendulum;
+    expect(words('rad', { mean: 0, least: -1, greatest: 1 }, { ...noRange, pendulum })).toBeNull();
+  });
+});
+
+test('a run that began within the hours of its room and will end outside of them; one that was begun outside on purpose is left alone', () => {
+  const room = { hours: { nightWindow: { from: '21:00', until: '06:30' }, blackouts: [] }, timeZone: 'Europe/Zurich' };
+  const at = (begins: string, ends: string) => lateWords({ startedAtUtcMs: Date.parse(begins), predictedEndUtcMs: Date.parse(ends) }, room);
+  expect(at('2031-02-14T21:00:00Z', '2031-02-15T05:00:00Z')).toBeNull();
+  expect(at('2031-02-14T21:00:00Z', '2031-02-15T06:00:00Z')).toContain('the night window of the room is 21:00 to 06:30');
+  expect(at('2031-02-14T12:00:00Z', '2031-02-15T06:00:00Z')).toBeNull();
+  expect(lateWords({ startedAtUtcMs: 0, predictedEndUtcMs: null }, room)).toBeNull();
+});
+
+test('the list of alarms that users read names each, and whom it tells', () => {
+  const tells: Record<Ringing, string> = { always: 'rings', allowed: 'rings', morning: 'in the morning', never: 'log' };
+  const rows = readFileSync(join(__dirname, '../../../docs/alarms.md'), 'utf8').matchAll(
+    /^\| ([^|]+) \|[^|]+\|[^|]+\| (rings|in the morning|log)\b/gm,
+  );
+  const told = Object.fromEntries([...rows].map(([, title, whom]) => [title, whom]));
+  expect(told).toEqual(Object.fromEntries(alarmCodes.map((code) => [alarmKinds[code].title, tells[alarmKinds[code].rings]])));
 });

@@ -90,6 +90,10 @@ test('never arms: two hours before, whoever made it is told that the arm is miss
     text: expect.stringContaining('Nothing has moved.'),
   });
   expect(mails).toHaveLength(2);
+  const alarms = (await lab.as('viewer', 'GET', `${base}/alarms`).expect(200)).body.items as { code: string; rings: string }[];
+  expect(alarms).toContainEqual(
+    expect.objectContaining({ code: 'missed-start', rings: 'never', words: expect.stringContaining('Armed on site') }),
+  );
 });
 
 test('recurs at the local time through the change of the clocks; one start is skipped and taken back; paused and continued', async () => {

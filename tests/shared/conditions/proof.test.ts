@@ -6,7 +6,7 @@ import { demoRigWide } from '@/shared/rig/demo-rigs';
 
 const signal = predictSignal(demoRigWide)?.signalRad ?? 0;
 const dwell = (side: 'near' | 'far', change: Partial<DwellFacts> = {}): DwellFacts => ({
-  ...{ seq: 1, side, midUtcMs: 0, good: true, why: [], silent: false, noResponse: null, loud: null },
+  ...{ seq: 1, side, midUtcMs: 0, good: true, why: [], silent: false, noResponse: null, excursion: null, loud: null },
   centreRad: (side === 'near' ? signal : -signal) / 2,
   residualRad: 1e-5,
   period: { value: 420, u: 0.5 },
