@@ -1,8 +1,7 @@
-import { demoIds } from '@/db/demo/seed';
 import { LabClient, pause } from '../bench/lib/lab-client';
 import { ServerProcess } from '../bench/lib/server-process';
 import { soak } from './report';
-import { countOf, judged, listen, withRealNight, type RealNight } from './run/real-night';
+import { countOf, driverOf, judged, listen, withRealNight, type RealNight } from './run/real-night';
 
 /**
  * Three servers on one database and one controller, which hears all of them: at some instant the one that drives is frozen (SIGSTOP) for 1 to 10 s,
@@ -16,17 +15,6 @@ const LEASE_S = 3;
 const TAKEN_OVER_WITHIN_S = 5;
 const PATIENCE_MS = 30_000;
 const deeds = ['freeze', 'kill', 'cut'] as const;
-
-/** Looks at the living servers until one drives the rig with a line that answers. */
-async function driverOf(servers: readonly ServerProcess[], { cookie }: RealNight): Promise<ServerProcess> {
-  for (const began = performance.now(); performance.now() - began < PATIENCE_MS; await pause(50)) {
-    for (const server of servers) {
-      const { body } = await new LabClient(server.address, cookie).get(`/labs/${demoIds.lab}/rigs/${demoIds.rig}`);
-      if ((body as { live: { condition: string } }).live.condition === 'ready') return server;
-    }
-  }
-  throw new Error('nobody drives the rig');
-}
 
 async function until(holds: () => boolean, withinMs: number): Promise<boolean> {
   for (const began = performance.now(); !holds(); await pause(10)) if (performance.now() - began > withinMs) return false;

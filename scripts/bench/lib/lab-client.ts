@@ -55,7 +55,7 @@ export class LabClient {
       return live.condition === 'ready' || null;
     });
     const until = new Date(Date.now() + 12 * 3_600_000).toISOString();
-    await this.post(`${rig}/cautions`, { version: cautionsVersion });
+    await this.sign();
     await this.post(`${rig}/arm`, { name: 'Ilse Marrowby', until });
     for (const armKey of ['off', 'on']) {
       await (turnKey === undefined ? this.post(`${rig}/virtual`, { armKey }) : turnKey(armKey === 'on'));
@@ -65,6 +65,10 @@ export class LabClient {
       });
     }
     await this.patiently('the exit delay', async () => ((await this.get(rig)).body as { arm: object | null }).arm, patience);
+  }
+
+  async sign(): Promise<void> {
+    await this.post(`/labs/${demoIds.lab}/rigs/${this.rig.id}/cautions`, { version: cautionsVersion });
   }
 
   /** Starts the first revision of a protocol on the client's rig as soon as the server lets it, and waits until it runs. Returns the run's id. */

@@ -49,13 +49,21 @@ export class ServerProcess {
     return new ServerProcess(child, address);
   }
 
+  get pid(): number {
+    return this.child.pid ?? 0;
+  }
+
+  isAlive(): boolean {
+    return this.child.exitCode === null && this.child.signalCode === null;
+  }
+
   signal(signal: 'SIGSTOP' | 'SIGCONT'): void {
     this.child.kill(signal);
   }
 
   /** Ends the process and waits until it is gone. */
   async end(signal: 'SIGTERM' | 'SIGKILL' = 'SIGTERM'): Promise<void> {
-    if (this.child.exitCode !== null || this.child.signalCode !== null) return;
+    if (!this.isAlive()) return;
     const gone = once(this.child, 'exit');
     this.child.kill(signal);
     await gone;

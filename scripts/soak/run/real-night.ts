@@ -1,12 +1,13 @@
 import { mkdtempSync, rmSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import { rigLinks } from '@/db/schema';
+import { demoIds, demoPeople } from '@/db/demo/seed';
+import { arms, rigLinks } from '@/db/schema';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import { verifyChain } from '@/shared/archive/chain';
 import type { ChainedEvent } from '@/shared/archive/run-records';
-import { withDatabase } from '../../bench/lib/fresh-database';
-import { LabClient } from '../../bench/lib/lab-client';
+import { withDatabase, type BenchDatabase } from '../../bench/lib/fresh-database';
+import { LabClient, pause } from '../../bench/lib/lab-client';
 import { addMembers, seedLab } from '../../bench/lib/people';
 import { ServerProcess, type ServerSetting } from '../../bench/lib/server-process';
 import { eventsOf, swings } from '../../bench/lib/swings';
@@ -23,9 +24,20 @@ export interface RealNight {
 
 /** The exit delay of a rig that stands in a room is 2 min. */
 const armPatienceMs = 150_000;
+const driverPatienceMs = 30_000;
+
+interface NightOptions {
+  /** Somebody armed the rig before the first server began: nobody waits for an exit delay. */
+  armed?: boolean;
+  /** Address at which the servers find their database. */
+  through?: (url: string) => string;
+}
 
 /** Begins such a run under one server, gives both to `work`, which has the server from then on, and tidies up. */
-export function withRealNight<T>(work: (night: RealNight, first: ServerProcess) => Promise<T>): Promise<T> {
+export function withRealNight<T>(
+  work: (night: RealNight, first: ServerProcess) => Promise<T>,
+  { armed = false, through = (url) => url }: NightOptions = {},
+): Promise<T> {
   const folder = mkdtempSync(join(tmpdir(), 'evenfall-soak-night-'));
   return withDatabase(async (database) => {
     const controller = await WatchedController.start();
@@ -35,13 +47,15 @@ export function withRealNight<T>(work: (night: RealNight, first: ServerProcess) 
       await database.connection.db.update(rigLinks).set({ settings });
       const [cookie] = await addMembers(database, 'operator');
       const setting = (number = 0) => ({
-        databaseUrl: database.url,
+        databaseUrl: through(database.url),
         stateDir: join(folder, String(number)),
         env: { EVENFALL_LOG_LEVEL: 'silent' },
       });
+      if (armed) await armBefore(database, controller);
       const first = await ServerProcess.start(setting());
       const lab = new LabClient(first.address, cookie);
-      await lab.arm({ turnKey: async (on) => controller.turnArmKey(on), patienceMs: armPatienceMs });
+      if (armed) await lab.sign();
+      else await lab.arm({ turnKey: async (on) => controller.turnArmKey(on), patienceMs: armPatienceMs });
       const runId = await lab.start(await lab.issue(swings));
       return await work({ setting, cookie, controller, runId, told: new Map() }, first);
     } finally {
@@ -50,9 +64,28 @@ export function withRealNight<T>(work: (night: RealNight, first: ServerProcess) 
   }).finally(() => rmSync(folder, { recursive: true, force: true }));
 }
 
+async function armBefore({ connection: { db } }: BenchDatabase, controller: WatchedController): Promise<void> {
+  controller.turnArmKey(true);
+  const armedById = demoPeople.find(({ role }) => role === 'operator')?.id ?? '';
+  const fromAt = Date.now();
+  const untilAt = fromAt + 12 * 3_600_000;
+  await db.insert(arms).values({ labId: demoIds.lab, rigId: demoIds.rig, name: 'Ilse Marrowby', fromAt, untilAt, armedById });
+}
+
 /** Keeps what the run tells now: none of it may be gone later. */
 export async function listen({ cookie, runId, told }: RealNight, server: ServerProcess): Promise<void> {
   for (const event of await eventsOf(new LabClient(server.address, cookie), runId)) told.set(event.seq, event);
+}
+
+/** Looks at the living servers until one drives the rig with a line that answers. */
+export async function driverOf(servers: readonly ServerProcess[], { cookie }: RealNight): Promise<ServerProcess> {
+  for (const began = performance.now(); performance.now() - began < driverPatienceMs; await pause(50)) {
+    for (const server of servers) {
+      const { body } = await new LabClient(server.address, cookie).get(`/labs/${demoIds.lab}/rigs/${demoIds.rig}`);
+      if ((body as { live: { condition: string } }).live.condition === 'ready') return server;
+    }
+  }
+  throw new Error('nobody drives the rig');
 }
 
 /** What is wrong with the record at the end. */
