@@ -118,6 +118,7 @@ const kinds: Record<string, string> = {
   'edge-not-told': 'Not measured: the controller never told of this edge of a motion',
   'home-edge': 'Passed the home edge',
   'server-restarted': 'Taken up by a server',
+  'order-drawn': 'Order of the pass drawn',
 };
 
 /** The kind of an event as words: `link-lost` → `Link lost`. */

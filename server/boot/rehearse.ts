@@ -11,6 +11,7 @@ import { geometryOf } from '@/shared/physics/torque';
 import { excursionRefusals } from '@/shared/planning/excursion';
 import { checkProtocol } from '@/shared/protocol/check';
 import type { Finding } from '@/shared/protocol/finding';
+import { isShuffled } from '@/shared/protocol/shuffle';
 import { planTimeline } from '@/shared/protocol/timeline';
 import type { RigDocument } from '@/shared/rig/document';
 import { faultKinds, isFaultKind } from '../engine/rehearsal/rehearsal-faults';
@@ -170,16 +171,17 @@ function runStart(request: Request): RunStart & { simulated: SimulatedRun } {
     operator: 'rehearsal',
     notes: document.notes ?? '',
     arm: null,
+    ...(isShuffled(document) ? { shuffleSeed: simulated.seed } : {}),
     simulated,
   };
 }
 
 function writeArchive(folder: string, start: RunStart, result: Rehearsal): void {
   const { outcome, steps, events, channels, startedAtUtcMs, endedAtUtcMs } = result;
-  const { runId, operator, notes, massSetLabel, simulated, rig, protocol } = start;
+  const { runId, operator, notes, massSetLabel, shuffleSeed, simulated, rig, protocol } = start;
   const files = buildArchive(
     {
-      run: { runId, outcome, operator, startedAtUtcMs, endedAtUtcMs, notes, massSetLabel, simulated },
+      run: { runId, outcome, operator, startedAtUtcMs, endedAtUtcMs, notes, massSetLabel, shuffleSeed, simulated },
       rig,
       protocol,
       steps,

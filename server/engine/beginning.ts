@@ -98,6 +98,7 @@ export function startRun(draft: Draft): void {
       operator: start.operator,
       arm: start.arm,
       onInterruption: start.protocol.onInterruption ?? 'hold',
+      ...(start.shuffleSeed === undefined ? {} : { shuffleSeed: start.shuffleSeed }),
     },
     draft.event.at,
   );

@@ -6,6 +6,7 @@ import type { Instant } from '../interfaces/clock';
 import type { MotionSent } from '../interfaces/turntable-link';
 import type { Draft } from './draft';
 import type { RunSnapshot } from './run-context';
+import { noteOrders } from './orders';
 import { forgetPosition, noteHomed } from './position';
 import { cursorMoment } from './dwells';
 import { toleranceDeg } from './rows';
@@ -26,10 +27,11 @@ export function takeAhead(draft: Draft): void {
   context.step = null;
   context.ahead = null;
   for (;;) {
-    const { item, cursor } = advanceCursor(draft.start, context.cursor, cursorMoment(draft));
+    const { item, cursor, drawn } = advanceCursor(draft.start, context.cursor, cursorMoment(draft));
     context.dwellJustNotGood = false;
     if (item === null) return;
     context.cursor = cursor;
+    noteOrders(draft, drawn);
     if (item.part?.kind === 'move' || (item.part === undefined && item.step.kind === 'swing')) {
       openSwing(draft, { item, commandId: ahead.commandId, startUtcMs: ahead.startUtcMs, late: false });
       noteBegan(draft);

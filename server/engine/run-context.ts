@@ -187,6 +187,8 @@ export interface RunContext {
   swungFromDeg: number | null;
   /** The dwell for which the run was held by itself last: those up to it ask for no hold any more. */
   heldForDwell: number | null;
+  /** Shuffled passes whose order the log has told last; absent: none. */
+  ordersTold?: string[];
   /** The pair that the dwells so far have left open. */
   pair: OpenPair;
   /** Set by `hold after this dwell`. */

@@ -13,6 +13,7 @@ import {
 import { homingObstacle } from '@/shared/protocol/homing';
 import { pathObstacles } from '@/shared/protocol/motion-path';
 import { stationAt } from '@/shared/protocol/stations';
+import type { PassOrder } from '@/shared/protocol/shuffle';
 import { moveOf, partsOf } from '@/shared/protocol/step-parts';
 import { waitOf } from '@/shared/protocol/wait';
 import type { RigMotion } from '@/shared/rig/document';
@@ -20,6 +21,7 @@ import type { Instant } from '../interfaces/clock';
 import { beginAwaiting } from './awaiting';
 import { cursorMoment, holdOfDwells, lookAtDwell } from './dwells';
 import type { Draft } from './draft';
+import { noteOrders } from './orders';
 import { runProof } from './proofs';
 import { newRow, stationOf, toleranceDeg } from './rows';
 import type { ActiveStep, Motion, RunContext } from './run-context';
@@ -44,7 +46,7 @@ export function chooseAfter(draft: Draft, late: boolean): void {
       context.next = 'failed';
       return;
     }
-    const { item, cursor } = next;
+    const { item, cursor, drawn } = next;
     if (item === null) {
       context.cursor = cursor;
       context.next = 'finished';
@@ -55,6 +57,7 @@ export function chooseAfter(draft: Draft, late: boolean): void {
       return;
     }
     context.cursor = cursor;
+    noteOrders(draft, drawn);
     // Not before: a hold between two steps must not make a pass good that was not.
     context.dwellJustNotGood = false;
     if (item.step.kind === 'mark') writeMark(draft, item);
@@ -323,22 +326,25 @@ export function sendAhead(draft: Draft): void {
   if ((holds && step.pause !== true) || !draft.controller.positionKnown) return;
   const next = peekMove(draft, endUtcMs);
   if (next === null) return;
-  const move = moveOf(next, draft.start.rig, context.moment.angleDeg);
+  const move = moveOf(next.item, draft.start.rig, context.moment.angleDeg);
   if (obstacleOn(draft, move.targetDeg) !== null) return;
+  noteOrders(draft, next.drawn);
   const commandId = sendMove(draft, move, endUtcMs);
   context.ahead = { commandId, targetDeg: move.targetDeg, startUtcMs: endUtcMs, cancelled: false };
   context.deadlineUtcMs = endUtcMs + BEGIN_GRACE_MS;
 }
 
 /** The move that follows at `utcMs`, looking through marks, or null where something else follows. */
-function peekMove(draft: Draft, utcMs: number): PlannedItem | null {
+function peekMove(draft: Draft, utcMs: number): { item: PlannedItem; drawn: PassOrder[] } | null {
   let { cursor } = draft.context;
+  const drawn: PassOrder[] = [];
   let moment: CursorMoment = cursorMoment(draft, utcMs);
   for (;;) {
     const next = nextItem(draft, { cursor, moment });
     moment = { ...moment, notGood: false };
     if (next?.item == null) return null;
-    if (isMove(next.item, draft)) return next.item;
+    drawn.push(...(next.drawn ?? []));
+    if (isMove(next.item, draft)) return { item: next.item, drawn };
     if (next.item.step.kind !== 'mark') return null;
     cursor = next.cursor;
   }

@@ -72,6 +72,7 @@ export async function archiveInputOf(services: Services, run: RunRecord, exclusi
       endedAtUtcMs: run.endedAt,
       notes: start.notes,
       massSetLabel: start.massSetLabel,
+      shuffleSeed: start.shuffleSeed,
       simulated: start.simulated,
     },
     rig: start.rig,

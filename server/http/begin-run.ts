@@ -3,6 +3,7 @@ import type { ProblemCode } from '@/shared/contracts/problem';
 import { CODATA_2022_G } from '@/shared/physics/constants';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { checkProtocol } from '@/shared/protocol/check';
+import { isShuffled } from '@/shared/protocol/shuffle';
 import { StartRefused } from '../engine/rig-supervisor';
 import { enqueueJob } from '../store/jobs';
 import type { MassSetRecord, RigRecord } from '../store/rigs';
@@ -47,7 +48,11 @@ export function assertFreshTap(tappedAt: string | undefined, nowUtcMs: number, a
   );
 }
 
-function runStartOf({ me, membership, services }: Caller, begin: Begin): Omit<RunStart, 'rig' | 'massSetLabel' | 'arm' | 'simulated'> {
+function runStartOf(
+  { me, membership, services }: Caller,
+  begin: Begin,
+  seed: number = seedOf(services.newId()),
+): Omit<RunStart, 'rig' | 'massSetLabel' | 'arm' | 'simulated'> {
   return {
     labId: membership.labId,
     runId: services.newId(),
@@ -60,8 +65,12 @@ function runStartOf({ me, membership, services }: Caller, begin: Begin): Omit<Ru
     timeZone: membership.timeZone,
     operator: me.name,
     notes: begin.notes,
+    ...(isShuffled(begin.protocol) ? { shuffleSeed: seed } : {}),
   };
 }
+
+/** 32 random bits. */
+const seedOf = (uuid: string): number => Number.parseInt(uuid.slice(0, 8), 16);
 
 /** Checks whose refusal has a code of its own. */
 const codes: Readonly<Record<string, ProblemCode>> = { free: 'rig-busy', lock: 'locked', armed: 'not-armed', cautions: 'not-signed' };
@@ -185,7 +194,7 @@ export async function beginRehearsal(caller: Caller, begin: Begin & { seed: numb
   const refusal = refusalOf(checkProtocol(begin.protocol, begin.rig.document, homed));
   if (refusal !== null) throw refusal;
   const start: RunStart = {
-    ...runStartOf(caller, begin),
+    ...runStartOf(caller, begin, begin.seed),
     rig: begin.rig.document,
     massSetLabel: 'As in the rig document',
     arm: null,

@@ -20,6 +20,7 @@ export interface ArchiveRunFacts {
   endedAtUtcMs: number | null;
   notes: string;
   massSetLabel: string;
+  shuffleSeed?: number | undefined;
   simulated: SimulatedRun | null;
 }
 
@@ -192,6 +193,7 @@ function runJson(run: ArchiveRunFacts, events: readonly ChainedEvent[]): Record<
     notes: run.notes,
     massSet: run.massSetLabel,
     events: { count: events.length, head: events.at(-1)?.hash ?? emptyChain.hash },
+    ...(run.shuffleSeed === undefined ? {} : { shuffleSeed: run.shuffleSeed }),
     ...(run.simulated === null ? {} : { simulated: run.simulated }),
   };
 }

@@ -21,6 +21,8 @@ export interface RunStart {
   notes: string;
   /** The arm that allowed the start; null in a rehearsal, which counts as armed. */
   arm: { name: string; untilUtcMs: number } | null;
+  /** From which the order of shuffled repeats is drawn; absent where the protocol has none. */
+  shuffleSeed?: number;
   /** A rehearsal's recipe; null for a run on a rig. */
   simulated: SimulatedRun | null;
 }

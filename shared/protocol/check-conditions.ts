@@ -46,15 +46,23 @@ function waitFindings(step: Step, path: string, rig: RigDocument): Finding[] {
   return findings;
 }
 
-/** A proof compares the last near and the last far dwell before it: where it is met first, both must have been. */
+/**
+ * A proof compares the last near and the last far dwell before it: where it is met first, both must have been. Within a repeat that is shuffled
+ * the other children may all come after it.
+ */
 function proofFindings(document: ProtocolDocument, rig: RigDocument): Finding[] {
   if (![...walkSteps(document.steps)].some(({ step }) => step.kind === 'proof')) return [];
   const { items } = planTimeline({ protocol: document, rig, timeZone: 'UTC' }, { utcMs: 0, angleDeg: rig.motion?.homeDeg ?? 0 });
-  const sides = new Set<'near' | 'far' | null>();
+  const shuffled = [...walkSteps(document.steps)].flatMap(({ step, path }) =>
+    step.kind === 'repeat' && step.order === 'shuffled' ? [`${path}.`] : [],
+  );
+  const before: { documentPath: string; side: 'near' | 'far' | null }[] = [];
   const refused = new Set<string>();
   for (const { kind, documentPath, angleToDeg } of items) {
-    if (kind === 'dwell') sides.add(sideAt(rig, angleToDeg));
-    if (kind === 'proof' && !(sides.has('near') && sides.has('far'))) refused.add(documentPath);
+    if (kind === 'dwell') before.push({ documentPath, side: sideAt(rig, angleToDeg) });
+    if (kind !== 'proof') continue;
+    const sure = before.filter((dwell) => shuffled.every((repeat) => isSurelyBefore(dwell.documentPath, { documentPath, repeat })));
+    if (!sure.some(({ side }) => side === 'near') || !sure.some(({ side }) => side === 'far')) refused.add(documentPath);
   }
   return [...refused].map((path) => ({
     code: 'proof-needs-pair',
@@ -62,4 +70,11 @@ function proofFindings(document: ProtocolDocument, rig: RigDocument): Finding[] 
     message:
       'A proof compares the last near and the last far dwell before it, and there is no such pair. Put a near and a far dwell before it.',
   }));
+}
+
+/** Not in another child of the shuffled repeat that the proof stands in. */
+function isSurelyBefore(dwellPath: string, { documentPath, repeat }: { documentPath: string; repeat: string }): boolean {
+  if (!documentPath.startsWith(repeat) || !dwellPath.startsWith(repeat)) return true;
+  const childOf = (path: string) => path.slice(repeat.length).split('.', 1)[0];
+  return childOf(dwellPath) === childOf(documentPath);
 }

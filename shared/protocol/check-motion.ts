@@ -77,14 +77,13 @@ function afterList(steps: readonly Step[], situations: Situation[], { walk, pref
   let current = situations;
   for (const [index, step] of steps.entries()) {
     const path = `${prefix}${index + 1}.${step.kind}`;
-    current = different(
-      step.kind === 'repeat'
-        ? afterRepeat(step, current, { walk, path })
-        : current.map((before) => afterStep(step, before, { walk, path })),
-    );
+    current = different(afterStepAt(step, current, { walk, path }));
   }
   return current;
 }
+
+const afterStepAt = (step: Step, situations: Situation[], at: At): Situation[] =>
+  step.kind === 'repeat' ? afterRepeat(step, situations, at) : situations.map((before) => afterStep(step, before, at));
 
 /** Two passes show everything: angles are absolute, so the third pass begins as the second did. */
 function afterRepeat(
@@ -92,11 +91,27 @@ function afterRepeat(
   before: Situation[],
   { walk, path }: { walk: Walk; path: string },
 ): Situation[] {
+  if (step.order === 'shuffled') return afterShuffled(step, before, { walk, path });
   const inside = { walk, prefix: `${path}.` };
   const once = afterList(step.steps, before, inside);
   if (step.times === 1) return once;
   const twice = afterList(step.steps, once, inside);
   return step.times === undefined ? [...before, ...once, ...twice] : [...once, ...twice];
+}
+
+/** Any child may come first, and after any other: each is looked at from all that the others leave, until nothing new comes of it. */
+function afterShuffled(
+  step: Extract<Step, { kind: 'repeat' }>,
+  before: Situation[],
+  { walk, path }: { walk: Walk; path: string },
+): Situation[] {
+  let from = different(before);
+  for (;;) {
+    const after = step.steps.flatMap((child, index) => afterStepAt(child, from, { walk, path: `${path}.${index + 1}.${child.kind}` }));
+    const all = different([...from, ...after]);
+    if (all.length === from.length) return different(step.times === undefined ? all : after);
+    from = all;
+  }
 }
 
 function different(situations: Situation[]): Situation[] {

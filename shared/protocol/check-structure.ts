@@ -38,6 +38,13 @@ function repeatFindings(step: RepeatStep, path: string, depth: number): Finding[
     });
   if (step.steps.length === 0)
     findings.push({ code: 'no-steps', path, message: 'The repeat holds no steps. Put at least one into it, or remove it.' });
+  const loose = step.order === 'shuffled' ? step.steps.findIndex(({ kind }) => kind !== 'repeat') : -1;
+  if (loose >= 0)
+    findings.push({
+      code: 'shuffle-needs-repeats',
+      path,
+      message: `The order "shuffled" takes repeats alone, so that what belongs together stays together, and step ${path}.${loose + 1}.${step.steps[loose]?.kind ?? ''} is none. Put it into a repeat of 1 time, or leave the order as written.`,
+    });
   const byU = step.until !== undefined && 'relativeStatisticalU' in step.until;
   const needsAtMost = step.counting === 'good' || byU;
   if (needsAtMost && step.atMost === undefined)

@@ -1,5 +1,6 @@
 import type { RepeatStep, Step } from './document';
 import { nextOccurrenceUtcMs } from './durations';
+import { numberAt, orderedPass, type OrderedSteps, type PassOrder } from './shuffle';
 import { type LeafStep, type CursorPlan, stateAfterIfPossible } from './step-effect';
 import { partsIfPossible, type StepPart } from './step-parts';
 
@@ -64,37 +65,44 @@ export function beginCursor(): CursorState {
  * is a call whose cursor is dropped.
  * @throws RangeError beyond 10,000 executed steps, and for a repeat that goes round without a step.
  */
-export function advanceCursor(
-  plan: CursorPlan,
-  cursor: CursorState,
-  moment: CursorMoment,
-): { item: PlannedItem | null; cursor: CursorState } {
+export function advanceCursor(plan: InnerPlan, cursor: CursorState, moment: CursorMoment): CursorAdvance {
   const [part, ...others] = cursor.parts ?? [];
   if (part !== undefined) return { item: part, cursor: { ...cursor, parts: others } };
   const frames = cursor.frames.map((frame) => (moment.notGood === true ? { ...frame, spoilt: true } : { ...frame }));
+  const drawn: PassOrder[] = [];
   for (let decisions = 0; decisions <= greatestStepCount; decisions += 1) {
-    const lists = listsOf(plan.protocol.steps, frames);
+    const lists = listsOf(plan, frames);
     const frame = frames[frames.length - 1];
-    const step = frame && lists[lists.length - 1]?.[frame.next];
-    if (frame === undefined) break;
+    const list = lists[lists.length - 1];
+    const step = frame && list?.steps[frame.next];
+    if (frame === undefined || list === undefined) break;
     if (step === undefined) {
-      if (frames.length === 1) return atEnd(plan, { ...cursor, frames });
-      const repeat = lists[lists.length - 2]?.[frames[frames.length - 2]?.next ?? -1] as RepeatStep;
+      const outer = lists[lists.length - 2];
+      const place = frames[frames.length - 2]?.next ?? -1;
+      if (outer === undefined) return atEnd(plan, { ...cursor, frames });
+      const repeat = outer.steps[place] as RepeatStep;
       Object.assign(frame, { good: (frame.good ?? frame.pass - 1) + (frame.spoilt === true ? 0 : 1), spoilt: false });
-      if (anotherPass(repeat, frame, { plan, moment })) Object.assign(frame, { next: 0, pass: frame.pass + 1 });
-      else {
+      const next = passAt(outer, place, { repeat, pass: frame.pass + 1, plan });
+      if (anotherPass(repeat, frame, { plan, moment, next })) {
+        Object.assign(frame, { next: 0, pass: frame.pass + 1 });
+        drawn.push(...orderOf(next));
+      } else {
         frames.pop();
         (frames[frames.length - 1] as CursorFrame).next += 1;
       }
     } else if (step.kind === 'repeat') {
       const inner: CursorFrame = { next: 0, pass: 0, deadlineUtcMs: deadlineOf(step, plan, moment) };
-      if (step.steps.length > 0 && anotherPass(step, inner, { plan, moment })) frames.push({ ...inner, pass: 1 });
-      else frame.next += 1;
+      const next = passAt(list, frame.next, { repeat: step, pass: 1, plan });
+      if (step.steps.length > 0 && anotherPass(step, inner, { plan, moment, next })) {
+        frames.push({ ...inner, pass: 1 });
+        drawn.push(...orderOf(next));
+      } else frame.next += 1;
     } else {
       const item = itemOf(lists, frames, step);
       frame.next += 1;
       if (cursor.executed >= greatestStepCount) throw new RangeError(`a protocol executes at most ${greatestStepCount} steps`);
-      return withParts(plan, moment, { item, cursor: { ...cursor, frames, executed: cursor.executed + 1 } });
+      const given = withParts(plan, moment, { item, cursor: { ...cursor, frames, executed: cursor.executed + 1 } });
+      return drawn.length === 0 ? given : { ...given, drawn };
     }
   }
   throw new RangeError('a repeat goes round without a step');
@@ -109,26 +117,49 @@ function withParts(plan: CursorPlan, { angleDeg }: CursorMoment, { item, cursor 
   return first === undefined ? { item, cursor } : { item: first, cursor: { ...cursor, parts: others } };
 }
 
+/** A list of steps being worked through. */
+interface List extends OrderedSteps {
+  /** Path of the pass, `2.repeat[3]`; empty for the outermost list. */
+  path: string;
+}
+
+/** A plan of which only one pass of a repeat is carried out: its steps have the paths and orders that they have in the whole. */
+interface InnerPlan extends CursorPlan {
+  within?: List;
+}
+
+interface CursorAdvance {
+  item: PlannedItem | null;
+  cursor: CursorState;
+  /** The shuffled passes that begin with this step, outermost first; absent: none. */
+  drawn?: PassOrder[];
+}
+
 /** The lists of steps that the frames work through, outermost first. */
-function listsOf(steps: readonly Step[], frames: readonly CursorFrame[]): (readonly Step[])[] {
-  const lists = [steps];
-  for (const frame of frames.slice(0, -1)) {
-    const step = lists[lists.length - 1]?.[frame.next];
-    lists.push(step?.kind === 'repeat' ? step.steps : []);
+function listsOf(plan: InnerPlan, frames: readonly CursorFrame[]): List[] {
+  const lists = [plan.within ?? { path: '', steps: plan.protocol.steps, order: null }];
+  for (const [depth, { next }] of frames.slice(0, -1).entries()) {
+    const list = lists[depth] as List;
+    const step = list.steps[next];
+    const pass = frames[depth + 1]?.pass ?? 1;
+    lists.push(step?.kind === 'repeat' ? passAt(list, next, { repeat: step, pass, plan }) : { path: '', steps: [], order: null });
   }
   return lists;
 }
 
-function itemOf(lists: readonly (readonly Step[])[], frames: readonly CursorFrame[], step: LeafStep): PlannedItem {
-  const parts = frames.map((frame, depth) => {
-    const kind = lists[depth]?.[frame.next]?.kind ?? '';
-    return { plain: `${frame.next + 1}.${kind}`, pass: frames[depth + 1]?.pass };
-  });
-  return {
-    path: parts.map(({ plain, pass }) => (pass === undefined ? plain : `${plain}[${pass}]`)).join('.'),
-    documentPath: parts.map(({ plain }) => plain).join('.'),
-    step,
-  };
+/** The steps of one pass of the repeat at a place of a list. */
+function passAt(list: List, place: number, { repeat, pass, plan }: { repeat: RepeatStep; pass: number; plan: CursorPlan }): List {
+  const path = `${list.path === '' ? '' : `${list.path}.`}${numberAt(list, place)}.repeat[${pass}]`;
+  return { path, ...orderedPass(repeat, path, plan.shuffleSeed) };
+}
+
+const orderOf = ({ path, order }: List): PassOrder[] => (order === null ? [] : [{ path, order: order.map((place) => place + 1) }]);
+
+function itemOf(lists: readonly List[], frames: readonly CursorFrame[], step: LeafStep): PlannedItem {
+  const list = lists[lists.length - 1] as List;
+  const plain = `${numberAt(list, frames[frames.length - 1]?.next ?? 0)}.${step.kind}`;
+  const path = list.path === '' ? plain : `${list.path}.${plain}`;
+  return { path, documentPath: path.replace(/\[\d+\]/g, ''), step };
 }
 
 function atEnd(plan: CursorPlan, cursor: CursorState): { item: PlannedItem | null; cursor: CursorState } {
@@ -143,9 +174,16 @@ function deadlineOf(repeat: RepeatStep, plan: CursorPlan, moment: CursorMoment):
   return nextOccurrenceUtcMs({ localTime: repeat.until.localTime, timeZone: plan.timeZone, utcMs: moment.utcMs });
 }
 
-function anotherPass(repeat: RepeatStep, frame: CursorFrame, context: { plan: CursorPlan; moment: CursorMoment }): boolean {
+interface Passing {
+  plan: CursorPlan;
+  moment: CursorMoment;
+  /** The pass in question. */
+  next: List;
+}
+
+function anotherPass(repeat: RepeatStep, frame: CursorFrame, context: Passing): boolean {
   if (repeat.atMost !== undefined && frame.pass >= repeat.atMost) return false;
-  if (frame.deadlineUtcMs !== null) return passEndsBy(repeat, frame.deadlineUtcMs, context);
+  if (frame.deadlineUtcMs !== null) return passEndsBy(frame.deadlineUtcMs, context);
   if (repeat.until !== undefined && 'relativeStatisticalU' in repeat.until)
     return frame.pass < leastPasses(repeat) || !isReached(repeat.until.relativeStatisticalU, context);
   if (repeat.counting !== 'good') return frame.pass < (repeat.times ?? 0);
@@ -165,8 +203,8 @@ function isReached(wanted: number, { plan, moment }: { plan: CursorPlan; moment:
 const roundingMs = 0.5;
 
 /** Whether a pass of the repeat that began at the moment would end, by plan, no later than the deadline. */
-function passEndsBy(repeat: RepeatStep, deadlineUtcMs: number, { plan, moment }: { plan: CursorPlan; moment: CursorMoment }): boolean {
-  const passPlan: CursorPlan = { ...plan, protocol: { steps: repeat.steps } };
+function passEndsBy(deadlineUtcMs: number, { plan, moment, next: pass }: Passing): boolean {
+  const passPlan: InnerPlan = { ...plan, protocol: { steps: [] }, within: pass };
   let state = { ...moment, swingStartUtcMs: null as number | null };
   let cursor = beginCursor();
   while (state.utcMs <= deadlineUtcMs + roundingMs) {

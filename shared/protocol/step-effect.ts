@@ -18,6 +18,8 @@ export interface CursorPlan {
    * statistical u its greatest number of passes, one that counts good passes as if all were good; `least` and `most`: the bounds.
    */
   conditions?: 'least' | 'expected' | 'most';
+  /** From which the order of shuffled repeats is drawn; absent: that of a plan. */
+  shuffleSeed?: number;
 }
 
 export interface PlanState {

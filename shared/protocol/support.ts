@@ -1,4 +1,4 @@
-import type { ProtocolDocument, RepeatStep, Step } from './document';
+import type { ProtocolDocument, Step } from './document';
 import type { Finding } from './finding';
 import { walkSteps } from './step-path';
 
@@ -25,13 +25,7 @@ function stepNotYet(step: Step): string[] {
   switch (step.kind) {
     case 'mark':
       return step.frame === true ? ['Camera frames are not built yet. Set frame to false or leave it out.'] : [];
-    case 'repeat':
-      return repeatNotYet(step);
     default:
       return isBuilt(step.kind) ? [] : [`The step kind "${step.kind}" is not built yet. Built are: ${[...builtKinds].join(', ')}.`];
   }
-}
-
-function repeatNotYet({ order }: RepeatStep): string[] {
-  return order === 'shuffled' ? ['The order "shuffled" is not built yet. Use "as written".'] : [];
 }

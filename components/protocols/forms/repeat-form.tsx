@@ -1,6 +1,6 @@
 import { View } from 'react-native';
 import { useLab } from '@/components/api';
-import { Body, Button, Check, Field, Label, Tabs } from '@/components/ui';
+import { Check, Field, Label, Tabs } from '@/components/ui';
 import { zoneName } from '@/shared/lib/format-time';
 import type { RepeatStep } from '@/shared/protocol/document';
 import { NumberField, positive, wholeFromOne } from './number-field';
@@ -15,7 +15,12 @@ const kindOf = ({ times, until }: RepeatStep): Kind =>
 export function RepeatForm({ step, onChange, disabled }: StepFormProps<RepeatStep>) {
   const { timeZone } = useLab();
   const { steps, until } = step;
-  const kept = { kind: 'repeat', steps, ...(step.label === undefined ? {} : { label: step.label }) } as const;
+  const kept = {
+    kind: 'repeat',
+    steps,
+    ...(step.label === undefined ? {} : { label: step.label }),
+    ...(step.order === undefined ? {} : { order: step.order }),
+  } as const;
   const kind = kindOf(step);
   const choose = (next: Kind) =>
     onChange(
@@ -27,12 +32,6 @@ export function RepeatForm({ step, onChange, disabled }: StepFormProps<RepeatSte
     );
   return (
     <View className="gap-4">
-      {step.order === 'shuffled' ? (
-        <View className="gap-3">
-          <Body>The order of this repeat is shuffled, which this version does not carry out yet.</Body>
-          {disabled ? null : <Button label="Keep the order as written" className="self-start" onPress={() => choose(kind)} />}
-        </View>
-      ) : null}
       <Tabs
         label="How often"
         value={kind}
@@ -57,11 +56,34 @@ export function RepeatForm({ step, onChange, disabled }: StepFormProps<RepeatSte
         />
       ) : null}
       {kind === 'u' ? <UFields step={step} onChange={onChange} disabled={disabled} /> : null}
+      <OrderField step={step} onChange={onChange} disabled={disabled} />
     </View>
   );
 }
 
-function without(step: RepeatStep, ...keys: ('counting' | 'atMost' | 'atLeast')[]): RepeatStep {
+/** Asked only where each child is a repeat, so that what belongs together stays together. */
+function OrderField({ step, onChange, disabled }: FieldsProps) {
+  const shuffled = step.order === 'shuffled';
+  const mayShuffle = step.steps.length > 1 && step.steps.every(({ kind }) => kind === 'repeat');
+  if (!shuffled && !mayShuffle) return null;
+  return (
+    <View className="gap-2">
+      <Check
+        label="Draw the order of its repeats anew in each pass"
+        value={shuffled}
+        onChange={(asked) => (disabled ? undefined : onChange(asked ? { ...step, order: 'shuffled' } : without(step, 'order')))}
+        testID="repeat-shuffled"
+      />
+      <Label>
+        {mayShuffle
+          ? 'From a seed that is drawn at the start and stands in the log. What is shown here is one order of many.'
+          : 'Each of its steps must be a repeat to be shuffled.'}
+      </Label>
+    </View>
+  );
+}
+
+function without(step: RepeatStep, ...keys: ('counting' | 'atMost' | 'atLeast' | 'order')[]): RepeatStep {
   const rest = { ...step };
   for (const key of keys) delete rest[key];
   return rest;

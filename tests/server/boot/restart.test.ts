@@ -1,5 +1,7 @@
+import { strFromU8, unzipSync } from 'fflate';
 import { demoIds } from '@/db/demo/seed';
 import type { ChainedEvent } from '@/shared/archive/run-records';
+import type { Step } from '@/shared/protocol/document';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol } from '@/tests/support/lab-server';
 
@@ -68,6 +70,38 @@ describe.each(['dwell', 'swing'] as const)('a restart of the server in a %s', (k
     await restart(8_000);
     await lab.until(runId, 'stopped');
   });
+});
+
+test('a shuffled protocol: the seed is drawn at the start, and the orders are the same for the server that takes the run up', async () => {
+  const block = (to: string): Step => ({
+    kind: 'repeat',
+    times: 1,
+    steps: [
+      { kind: 'swing', to },
+      { kind: 'dwell', for_s: 20 },
+    ],
+  });
+  const blocks: Step = { kind: 'repeat', times: 3, order: 'shuffled', steps: ['near', 'far', 'clear'].map(block) };
+  const runId = await lab.run(quickProtocol({ onInterruption: 'resume', steps: [{ kind: 'home' }, blocks] }));
+  await lab.advance(3_600_000, () => kindOf(runId) === 'dwell');
+  await restart(8_000);
+  await lab.until(runId, 'finished');
+  const events = await eventsOf(runId);
+  const { shuffleSeed } = events.find(({ kind }) => kind === 'run-started')?.data ?? {};
+  expect(Number.isInteger(shuffleSeed)).toBe(true);
+  const orders = events.filter(({ kind }) => kind === 'order-drawn').map(({ data }) => data as { path: string; order: number[] });
+  expect(orders.map(({ path }) => path)).toEqual([1, 2, 3].map((pass) => `2.repeat[${String(pass)}]`));
+  const dwells = (await stepsOf(runId)).filter(({ path, outcome }) => path.endsWith('dwell') && outcome === 'done').map(({ path }) => path);
+  expect(dwells).toEqual(orders.flatMap(({ path, order }) => order.map((number) => `${path}.${String(number)}.repeat[1].2.dwell`)));
+  const zip = await lab
+    .as('viewer', 'GET', `${runs}/${runId}/archive.zip`)
+    .buffer(true)
+    .parse((res, done) => {
+      const chunks: Buffer[] = [];
+      res.on('data', (chunk: Buffer) => chunks.push(chunk));
+      res.on('end', () => done(null, Buffer.concat(chunks)));
+    });
+  expect(JSON.parse(strFromU8(unzipSync(zip.body as Buffer)['run.json'] as Uint8Array))).toMatchObject({ shuffleSeed });
 });
 
 test('a run saved by another version of the engine is left alone, blocks its rig, and is ended by whoever looked at it', async () => {

@@ -1,0 +1,117 @@
+import * as fc from 'fast-check';
+import { checkProtocol } from '@/shared/protocol/check';
+import { advanceCursor, beginCursor, type PlannedItem } from '@/shared/protocol/cursor';
+import type { RepeatStep, Step } from '@/shared/protocol/document';
+import type { PassOrder } from '@/shared/protocol/shuffle';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
+import type { RigDocument } from '@/shared/rig/document';
+
+/** Repeats whose children come in an order that is drawn anew in each pass. */
+
+const mark = (label: string): Step => ({ kind: 'mark', label });
+const once = (...steps: Step[]): RepeatStep => ({ kind: 'repeat', times: 1, steps });
+const shuffled = (times: number, ...steps: Step[]): RepeatStep => ({ kind: 'repeat', times, order: 'shuffled', steps });
+const letters = (count: number) => Array.from({ length: count }, (_, index) => once(mark(String.fromCharCode(97 + index))));
+
+/** All that is executed, and what was told of orders with each step; the cursor goes through JSON at every step, as in a run that is restarted. */
+function run(steps: Step[], shuffleSeed: number, stepS = 1): { items: PlannedItem[]; drawn: (PassOrder & { before: string })[] } {
+  const plan = { protocol: { steps }, rig: demoRigWide, timeZone: 'UTC', shuffleSeed };
+  const items: PlannedItem[] = [];
+  const drawn: (PassOrder & { before: string })[] = [];
+  let cursor = beginCursor();
+  for (;;) {
+    const next = advanceCursor(plan, cursor, { utcMs: 1000 * stepS * items.length, angleDeg: 0 });
+    if (next.item === null) return { items, drawn };
+    const { path } = next.item;
+    drawn.push(...(next.drawn ?? []).map((pass) => ({ ...pass, before: path })));
+    items.push(next.item);
+    cursor = JSON.parse(JSON.stringify(next.cursor)) as typeof cursor;
+  }
+}
+const labelsOf = (items: readonly PlannedItem[]) => items.map(({ step }) => step.label ?? '').join('');
+
+test('each pass has each child once, by its number in the document, in the order that was told before', () => {
+  fc.assert(
+    fc.property(fc.integer({ min: 2, max: 6 }), fc.integer({ min: 1, max: 5 }), fc.nat(), (count, times, seed) => {
+      const { items, drawn } = run([shuffled(times, ...letters(count))], seed);
+      expect(items).toHaveLength(count * times);
+      expect(drawn.map(({ path }) => path)).toEqual(Array.from({ length: times }, (_, pass) => `1.repeat[${pass + 1}]`));
+      for (const [pass, { order, before }] of drawn.entries()) {
+        const own = items.slice(pass * count, (pass + 1) * count);
+        expect(own.map(({ path }) => path)).toEqual(order.map((number) => `1.repeat[${pass + 1}].${number}.repeat[1].1.mark`));
+        expect(before).toBe(own[0]?.path);
+        expect(labelsOf(own)).toBe(order.map((number) => String.fromCharCode(96 + number)).join(''));
+        expect([...order].sort()).toEqual(Array.from({ length: count }, (_, index) => index + 1));
+      }
+    }),
+    { numRuns: 40 },
+  );
+});
+
+test('the same seed gives the same orders; all orders are about as frequent', () => {
+  const three = [shuffled(600, ...letters(3))];
+  const { drawn } = run(three, 7);
+  expect(run(three, 7).drawn).toEqual(drawn);
+  expect(run(three, 8).drawn).not.toEqual(drawn);
+  const counts = new Map<string, number>();
+  for (const { order } of drawn) counts.set(order.join(''), (counts.get(order.join('')) ?? 0) + 1);
+  expect(counts.size).toBe(6);
+  // 100 each are expected, with a standard deviation of 9.
+  for (const count of counts.values()) expect(Math.abs(count - 100)).toBeLessThan(36);
+});
+
+test('nested: the inner one draws anew in each pass of the outer, and both are told before the first step', () => {
+  const { drawn, items } = run([shuffled(4, shuffled(2, ...letters(3)), once(mark('z')))], 3);
+  expect(items).toHaveLength(4 * 7);
+  const inner = drawn.filter(({ path }) => path.includes('.1.repeat'));
+  expect(inner).toHaveLength(8);
+  expect(new Set(inner.map(({ order }) => order.join(''))).size).toBeGreaterThan(2);
+  const outerFirst = drawn.findIndex(({ path, order }) => path === '1.repeat[1]' && order[0] === 1);
+  if (outerFirst >= 0) expect(drawn[outerFirst + 1]?.before).toBe(drawn[outerFirst]?.before);
+});
+
+test('until a time: a pass begins only if it ends in time in the order that it will have', () => {
+  const block = (seconds: number) => once({ kind: 'settle', for_s: seconds });
+  const plan = {
+    protocol: { steps: [{ ...shuffled(1, block(100), block(200)), times: undefined, until: { localTime: '00:10' } }] as Step[] },
+    ...{ rig: demoRigWide, timeZone: 'UTC', shuffleSeed: 1 },
+  };
+  const at = (utcMs: number) => advanceCursor(plan, beginCursor(), { utcMs, angleDeg: 0 }).item?.step;
+  expect(at(300_000)).toMatchObject({ kind: 'settle' });
+  expect(at(301_000)).toBeUndefined();
+});
+
+describe('what is refused', () => {
+  const check = (steps: Step[], rig: RigDocument = demoRigWide) =>
+    checkProtocol({ formatVersion: 1, name: 'Shuffled', steps }, rig).map(({ code, path }) => `${code} ${path}`);
+  const near: Step = { kind: 'swing', to: 'near' };
+  const far: Step = { kind: 'swing', to: 'far' };
+  const dwell: Step = { kind: 'dwell', for_s: 600 };
+  const home: Step = { kind: 'home' };
+
+  test('a child that is no repeat', () => {
+    expect(check([home, shuffled(2, once(near, dwell), dwell)])).toEqual(['shuffle-needs-repeats 2.repeat']);
+    expect(check([home, shuffled(2, once(near, dwell), once(far, dwell))])).toEqual([]);
+  });
+
+  test('a way that some order would take through a keep-out arc, though that as written does not', () => {
+    const steps = (order: Step[]) => [home, near, { kind: 'repeat', times: 1, order: 'shuffled', steps: order } as Step];
+    const arc = { ...demoRigWide, motion: { ...demoRigWide.motion, keepOut: [[60, 80]] } } as RigDocument;
+    const to = (angle: number): Step => once({ kind: 'swing', to: { angle_deg: angle } }, dwell);
+    expect(check(steps([to(40), to(10)]), arc)).toEqual([]);
+    expect(check([home, { kind: 'swing', to: { angle_deg: 90 } }, shuffled(1, to(100), to(40))], arc)).toContain(
+      'keep-out 3.repeat.2.repeat.1.swing',
+    );
+    expect(check([home, { kind: 'swing', to: { angle_deg: 40 } }, shuffled(1, to(50), to(40), to(90))], arc)).toEqual(
+      expect.arrayContaining(['keep-out 3.repeat.1.repeat.1.swing', 'keep-out 3.repeat.3.repeat.1.swing']),
+    );
+  });
+
+  test('a proof whose pair may come after it', () => {
+    const proof: Step = { kind: 'proof' };
+    const pair = [near, dwell, far, dwell];
+    expect(check([home, shuffled(1, once(...pair), once(proof))])).toEqual(['proof-needs-pair 2.repeat.2.repeat.1.proof']);
+    expect(check([home, ...pair, shuffled(1, once(...pair), once(proof))])).toEqual([]);
+    expect(check([home, shuffled(1, once(...pair, proof), once(far, dwell))])).toEqual([]);
+  });
+});
