@@ -24,7 +24,7 @@ export interface LiveState {
   beat: Beat | null;
   /** Device time of the newest beat or message, ms; null before the first. */
   heardAtMs: number | null;
-  /** Server minus device by the newest beats, ms: a beat that took longer shows a smaller difference, so the greatest counts. */
+  /** The run's time minus the device's by the newest beats, ms: a beat that took longer shows a smaller difference, so the greatest counts. */
   offsets: readonly number[];
   stream: 'opening' | 'open' | 'broken';
   /** Highest sequence number of the chain seen so far. */
@@ -89,7 +89,8 @@ function receive(before: LiveState, message: LiveMessage): LiveState {
     case 'samples':
       return withSamples(state, message.data);
     case 'beat': {
-      const offset = Date.parse(message.data.serverAt) - message.receivedAtMs;
+      // Deadlines and rows are in the time that the run keeps to.
+      const offset = Date.parse(message.data.serverAt) + (message.data.runAheadMs ?? 0) - message.receivedAtMs;
       return { ...state, beat: message.data, offsets: [...state.offsets, offset].slice(-keptOffsets) };
     }
   }
@@ -150,7 +151,7 @@ function thinned(utcMs: number[], value: number[]): { utcMs: number[]; value: nu
   return { utcMs: utcMs.filter(keep), value: value.filter(keep) };
 }
 
-/** Server minus device, ms; 0 before the first beat. */
+/** The time that the run keeps to minus the device's, ms; 0 before the first beat. */
 export function serverOffsetMs(state: LiveState): number {
   return state.offsets.length === 0 ? 0 : Math.max(...state.offsets);
 }

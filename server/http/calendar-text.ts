@@ -17,7 +17,7 @@ const words: Record<CalendarItem['state'], string> = {
   missed: 'Missed',
 };
 /** What was planned once and will not be, or was not, stays in the calendar, crossed out. */
-const cancelled: readonly CalendarItem['state'][] = ['blocked', 'paused', 'skipped', 'missed'];
+const cancelled: readonly CalendarItem['state'][] = ['blocked', 'skipped', 'missed'];
 const refreshS = 900;
 
 /** What is planned as iCalendar (RFC 5545), all instants in UTC. A start keeps its UID whatever becomes of it. */
@@ -31,8 +31,7 @@ export function calendarText(items: readonly CalendarItem[], { labName, origin, 
   for (const item of items)
     calendar.createEvent({
       id: `${item.scheduleId}.${String(Date.parse(item.dueAt))}@evenfall`,
-      // A start that is decided about was changed once since it was planned.
-      sequence: item.state === 'planned' ? 0 : 1,
+      sequence: sequenceOf(item),
       stamp: new Date(nowUtcMs),
       start: new Date(item.dueAt),
       end: new Date(item.endsAt),
@@ -41,8 +40,17 @@ export function calendarText(items: readonly CalendarItem[], { labName, origin, 
         .filter(Boolean)
         .join(' '),
       location: item.rigName,
-      status: cancelled.includes(item.state) ? ICalEventStatus.CANCELLED : ICalEventStatus.CONFIRMED,
+      status: statusOf(item),
       url: item.runId === null ? `${origin}/calendar` : `${origin}/runs/${item.runId}`,
     });
   return calendar.toString();
 }
+
+/** One whose schedule is paused may yet be. */
+function statusOf({ state }: CalendarItem): ICalEventStatus {
+  if (state === 'paused') return ICalEventStatus.TENTATIVE;
+  return cancelled.includes(state) ? ICalEventStatus.CANCELLED : ICalEventStatus.CONFIRMED;
+}
+
+/** Never falls (RFC 5545 3.8.7.4): a program that has heard of a skip must hear of it when the skip is taken back. In units of 10 s. */
+const sequenceOf = ({ changedAt }: CalendarItem): number => (changedAt === null ? 0 : Math.floor(Date.parse(changedAt) / 10_000));

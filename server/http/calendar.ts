@@ -7,7 +7,7 @@ import { againstRoom, type Stay } from '@/shared/schedule/room';
 import type { Handle } from '../store/database';
 import { listRigs, type RigRecord } from '../store/rigs';
 import { allSchedules, hoursOfRooms, startsBetween, type ScheduleRecord, type StartRow } from '../store/schedules';
-import { isoOf } from './maker';
+import { isoOf, isoOrNull } from './maker';
 
 export function scheduleViewOf(schedule: ScheduleRecord): ScheduleView {
   const { id, rigId, rigName, protocolId, protocolName, protocolRevision, massSetLabel, plan, notes, state, madeBy, madeAt } = schedule;
@@ -89,6 +89,7 @@ function itemOf(schedule: ScheduleRecord, { occurrence: { dueUtcMs, remark }, ro
     endsAt: isoOf(stay.endUtcMs),
     remark,
     runId: row?.runId ?? null,
+    changedAt: isoOrNull(row?.decidedAt ?? null),
   };
   if (row?.outcome != null) return { ...item, state: row.outcome === 'taken' ? 'planned' : row.outcome, why: row.why };
   if (dueUtcMs <= schedule.decidedUntilAt || schedule.state === 'ended') return null;

@@ -157,10 +157,10 @@ export async function concludeStart(
 }
 
 /** Takes a skip back; false where the start was not skipped. */
-export async function takeSkipBack(db: Handle, start: StartKey): Promise<boolean> {
+export async function takeSkipBack(db: Handle, start: StartKey, nowUtcMs: number): Promise<boolean> {
   const changed = await db
     .update(scheduleStarts)
-    .set({ outcome: null, why: '', decidedAt: null })
+    .set({ outcome: null, why: '', decidedAt: nowUtcMs })
     .where(and(ofStart(start), eq(scheduleStarts.outcome, 'skipped')));
   return changed.rowCount === 1;
 }

@@ -101,6 +101,8 @@ export const liveMessageSchemas = {
   /** Once a second. */
   beat: z.strictObject({
     serverAt: instantSchema,
+    /** How far the time that the run keeps to is ahead of `serverAt`, where the server's clock was set while the run went on. */
+    runAheadMs: z.number().optional(),
     link: z.enum(['closed', 'opening', 'ready', 'lost', 'refused']),
     lastReplyAt: instantSchema.nullable(),
     angleDeg: z.number().nullable(),

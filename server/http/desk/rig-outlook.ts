@@ -1,5 +1,6 @@
 import type { RunView } from '@/shared/contracts/runs';
 import type { LineMessage } from '@/shared/contracts/link';
+import { HOST_STEP_MS, wallUtcMs } from '@/server/interfaces/clock';
 import type { RigPlace, RigTold } from '@/server/interfaces/process-post';
 import { findRun } from '@/server/store/runs-read';
 import { isoOrNull } from '../maker';
@@ -34,10 +35,13 @@ export class HereOutlook implements RigOutlook {
   }
 
   beat({ rigId }: RigPlace): RigTold['beat'] {
-    const { stations, locks } = this.services();
+    const { stations, locks, supervisor } = this.services();
     const link = stations.get(rigId)?.link;
     const health = link?.health();
+    const clock = supervisor.activeOf(rigId)?.parts.clock;
+    const runAheadMs = clock === undefined ? 0 : Math.round(clock.utcMs() - wallUtcMs(clock));
     return {
+      ...(Math.abs(runAheadMs) < HOST_STEP_MS ? {} : { runAheadMs }),
       link: health?.condition ?? 'closed',
       lastReplyAt: isoOrNull(health?.lastReplyUtcMs ?? null),
       angleDeg: link?.controller()?.angleDeg ?? null,

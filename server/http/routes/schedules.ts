@@ -67,7 +67,7 @@ const planning = [
     await audited(context, entry, async (tx) => {
       const done = body.skipped
         ? await store.decideStart(tx, start, { outcome: 'skipped', why: `Skipped by ${me.name}.`, nowUtcMs })
-        : await store.takeSkipBack(tx, start);
+        : await store.takeSkipBack(tx, start, nowUtcMs);
       if (!done)
         throw new ProblemError(
           'not-possible-now',

@@ -133,6 +133,16 @@ test('the offset to the server comes from the quickest beat', () => {
   expect(serverOffsetMs(receive(noLive, ...beats))).toBeCloseTo(4980, 0);
 });
 
+test('a server whose clock is set while the run goes on moves no countdown: the run keeps to its own time', () => {
+  const beat = (serverMs: number, runAheadMs?: number): LiveMessage => {
+    const data = { ...beatAt(serverMs), ...(runAheadMs === undefined ? {} : { runAheadMs }) };
+    return { type: 'beat', receivedAtMs: nowUtcMs, data };
+  };
+  const before = receive(noLive, beat(nowUtcMs + 5_000));
+  for (const byMs of [-3_600_000, 3_600_000])
+    expect(serverOffsetMs(receive(before, beat(nowUtcMs + 5_000 + byMs, -byMs)))).toBeCloseTo(serverOffsetMs(before), 6);
+});
+
 describe('how old the newest word is', () => {
   const heard = { heardAtMs: 10_000, beat: beatAt(nowUtcMs), hasController: true };
 

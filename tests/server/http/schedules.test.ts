@@ -172,6 +172,24 @@ test('a calendar program reads it at a secret address, and no longer when that i
   expect(blocked?.description).toContain('floor is laid');
   const planned = events.find((event) => event.startDate.toJSDate().toISOString() === '2031-03-04T21:00:00.000Z');
   expect(planned?.component.getFirstPropertyValue('status')).toBe('CONFIRMED');
+  // Skipped, then taken back: the number of the revision never falls, or programs would go on showing it crossed out.
+  const revisionOf = async () => {
+    const all = new ICAL.Component(ICAL.parse((await read().expect(200)).text)).getAllSubcomponents('vevent');
+    const one = all.find((component) => component.getFirstPropertyValue('uid') === planned?.uid);
+    return { sequence: Number(one?.getFirstPropertyValue('sequence')), status: one?.getFirstPropertyValue('status') };
+  };
+  const scheduleId = planned?.uid.split('.')[0] ?? '';
+  const skip = (skipped: boolean) =>
+    lab.as('operator', 'PUT', `${base}/schedules/${scheduleId}/skips`).send({ dueAt: '2031-03-04T21:00:00Z', skipped }).expect(200);
+  const before = await revisionOf();
+  await skip(true);
+  const skipped = await revisionOf();
+  await lab.advance(20_000);
+  await skip(false);
+  const back = await revisionOf();
+  expect([before.status, skipped.status, back.status]).toEqual(['CONFIRMED', 'CANCELLED', 'CONFIRMED']);
+  expect(before.sequence).toBeLessThan(skipped.sequence);
+  expect(skipped.sequence).toBeLessThan(back.sequence);
   const again = new ICAL.Component(ICAL.parse((await read().expect(200)).text)).getAllSubcomponents('vevent');
   expect(again.map((component) => component.getFirstPropertyValue('uid'))).toEqual(events.map(({ uid }) => uid));
   expect(new Set(events.map(({ uid }) => uid)).size).toBe(events.length);

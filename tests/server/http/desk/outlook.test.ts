@@ -1,8 +1,9 @@
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import { AcrossOutlook } from '@/server/http/desk/across-outlook';
 import type { RigDesk } from '@/server/http/desk/rig-desk';
-import type { RigOutlook } from '@/server/http/desk/rig-outlook';
+import { HereOutlook, type RigOutlook } from '@/server/http/desk/rig-outlook';
 import { RigTeller } from '@/server/http/desk/rig-teller';
+import type { Services } from '@/server/http/services';
 import type { RigTold } from '@/server/interfaces/process-post';
 import { PostOffice } from '@/tests/support/post-office';
 
@@ -98,4 +99,15 @@ test('samples of a simulated rig go out with its beat while it is followed; thos
   made.teller.sampled(batch);
   await made.clock.advance(600);
   expect(samples()).toHaveLength(2);
+});
+
+test('a beat says how far the time of a run is from that of the server, where its clock was set meanwhile', () => {
+  const clock = { utcMs: () => 10_000, wallUtcMs: () => 3_610_000 };
+  const driven = { activeOf: () => ({ parts: { clock } }) };
+  const beatOf = (supervisor: object) =>
+    new HereOutlook(() => ({ stations: { get: () => null }, locks: { lockedBy: () => null }, supervisor }) as unknown as Services).beat(
+      place,
+    );
+  expect(beatOf(driven)).toEqual({ runAheadMs: -3_600_000, link: 'closed', lastReplyAt: null, angleDeg: null, lockedBy: null });
+  expect(beatOf({ activeOf: () => null })).not.toHaveProperty('runAheadMs');
 });
