@@ -1,4 +1,4 @@
-import type { RepeatStep, Step } from './document';
+import type { RepeatStep } from './document';
 import { nextOccurrenceUtcMs } from './durations';
 import { numberAt, orderedPass, type OrderedSteps, type PassOrder } from './shuffle';
 import { type LeafStep, type CursorPlan, stateAfterIfPossible } from './step-effect';
