@@ -1,5 +1,5 @@
 import * as z from 'zod';
-import { isAlarmCode, ringingOf } from '@/shared/alarms/catalog';
+import { answerAt, isAlarmCode, ringingOf } from '@/shared/alarms/catalog';
 import { calleesOf, morningUtcMs, nextCallee, type Callee } from '@/shared/alarms/rings';
 import { formatClock } from '@/shared/lib/format-time';
 import type { JobHandlers } from '../interfaces/jobs';
@@ -60,7 +60,7 @@ function messageOf(alarm: AlarmRecord, { rigName, labName, timeZone }: Pick<Arou
     paragraphs: [
       `${at} ${timeZone}: ${oneLine(alarm.words === '' ? kind.cause : alarm.words)}`,
       `What it means: ${kind.consequence}`,
-      `What to do: ${kind.answer}`,
+      `What to do: ${isAlarmCode(alarm.code) ? answerAt(alarm.code, at) : kind.answer}`,
       'Acknowledge it when you take care of it; otherwise the next person is rung.',
     ],
     path: `/alarms/${alarm.id}`,

@@ -1,4 +1,4 @@
-import { alarmCodes, alarmKinds, ringingOf, type AlarmCode } from '@/shared/alarms/catalog';
+import { alarmCodes, alarmKinds, answerAt, ringingOf, type AlarmCode } from '@/shared/alarms/catalog';
 import { alarmOfHold } from '@/shared/alarms/of-holds';
 import { consequencesOf, firstCauseOf, type GroupMember } from '@/shared/alarms/grouping';
 import { channelLimitSchema, passesLimit, type ChannelNow } from '@/shared/alarms/limits';
@@ -29,6 +29,14 @@ describe('the table of alarms', () => {
     expect(['interlock', 'limit', 'table-slipped', 'link-lost', 'proof-sign', 'whatever'].map(alarmOfHold)).toEqual([
       ...['interlock', 'limit', 'home-edge', 'held', 'proof-failed', 'held'],
     ]);
+  });
+
+  test('a first pair that is off asks to come back until half past eleven; nothing else does, and nobody is sent for in the night', () => {
+    const early = (code: AlarmCode, clock: string) => answerAt(code, clock).startsWith('It is early enough to come back: ');
+    expect(['22:30:00', '23:29:59', '23:30:00', '02:00:00', '11:59:59'].map((clock) => early('proof-failed', clock))).toEqual([
+      ...[true, true, false, false, false],
+    ]);
+    expect(early('interlock', '22:30:00')).toBe(false);
   });
 
   test('a restarted controller wakes only while over 3 h are left and somebody is near', () => {
