@@ -66,7 +66,7 @@ export function stepTitle(step: Step): string {
     case 'swing':
       return `Swing to ${targetWords(step.to)}`;
     case 'repeat':
-      return repeatTitle(step);
+      return step.order === 'shuffled' ? `${repeatTitle(step)}, shuffled` : repeatTitle(step);
     case 'wait':
       return 'localTime' in step.until ? `Wait until ${step.until.localTime}` : `Wait for ${step.until.channel}`;
     case 'mark':
