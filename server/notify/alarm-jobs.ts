@@ -1,6 +1,6 @@
 import * as z from 'zod';
-import { answerAt, isAlarmCode, ringingOf } from '@/shared/alarms/catalog';
-import { calleesOf, morningUtcMs, nextCallee, type Callee } from '@/shared/alarms/rings';
+import { isAlarmCode, ringingOf } from '@/shared/alarms/catalog';
+import { answerAt, calleesOf, morningUtcMs, nextCallee, type Callee } from '@/shared/alarms/rings';
 import { formatClock } from '@/shared/lib/format-time';
 import type { JobHandlers } from '../interfaces/jobs';
 import { alarmJobKinds, deferToMorning, groupIds, kindOf, type AlarmRecord } from '../store/alarms';

@@ -1,6 +1,6 @@
 import { formatClock, formatDay } from '../lib/format-time';
 import { isWithinHours } from './hours';
-import type { Ringing } from './catalog';
+import { alarmKinds, type AlarmCode, type Ringing } from './catalog';
 import type { CallSettings, OwnCall } from './settings';
 
 /** Who is rung next, and when what can wait is told: pure decisions over what was done so far. */
@@ -66,4 +66,13 @@ export function morningUtcMs(utcMs: number, { morningAt, timeZone }: { morningAt
 export function worryUtcMs(predictedEndUtcMs: number): number {
   const tenMin = 600_000;
   return Math.ceil((predictedEndUtcMs + quarterMs) / tenMin) * tenMin;
+}
+
+/** Hours of the evening in which whoever started the run may still come back to the rig (common practice, no source). */
+const evening = { from: '12:00', until: '23:30' };
+
+/** What to do, told at this time of day, hh:mm in the lab's zone. */
+export function answerAt(code: AlarmCode, clock: string): string {
+  const early = code === 'proof-failed' && clock >= evening.from && clock < evening.until;
+  return early ? `It is early enough to come back: ${alarmKinds[code].answer}` : alarmKinds[code].answer;
 }

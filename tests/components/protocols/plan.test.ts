@@ -62,7 +62,7 @@ const reads: readonly { step: Step; durationS: number | null; title: string; und
   { step: { kind: 'dwell', beat_periods: 2 }, durationS: 830, title: 'Dwell', under: 'beat of 2 T · 13\u202fmin 50\u202fs' },
   { step: { kind: 'dwell', periods: 1.5 }, durationS: null, title: 'Dwell', under: '1.5 T' },
   { step: { kind: 'repeat', times: 16, steps: pair }, durationS: null, title: 'Repeat 16 times', under: '' },
-  { step: { kind: 'repeat', times: 3, order: 'shuffled', steps: [] }, durationS: null, title: 'Repeat 3 times, shuffled', under: '' },
+  { step: { kind: 'repeat', times: 3, order: 'shuffled', steps: pair }, durationS: null, title: 'Repeat 3 times, shuffled', under: '' },
   { step: { kind: 'repeat', until: { localTime: '06:30' }, steps: pair }, durationS: null, title: 'Repeat until 06:30', under: '' },
   {
     step: { kind: 'wait', until: { localTime: '22:00', ifPast: 'hold' } },

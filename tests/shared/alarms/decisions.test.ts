@@ -1,8 +1,8 @@
-import { alarmCodes, alarmKinds, answerAt, ringingOf, type AlarmCode } from '@/shared/alarms/catalog';
+import { alarmCodes, alarmKinds, ringingOf, type AlarmCode } from '@/shared/alarms/catalog';
 import { alarmOfHold } from '@/shared/alarms/of-holds';
 import { consequencesOf, firstCauseOf, type GroupMember } from '@/shared/alarms/grouping';
 import { channelLimitSchema, passesLimit, type ChannelNow } from '@/shared/alarms/limits';
-import { calleesOf, morningUtcMs, nextCallee, worryUtcMs } from '@/shared/alarms/rings';
+import { answerAt, calleesOf, morningUtcMs, nextCallee, worryUtcMs } from '@/shared/alarms/rings';
 import { usualCallSettings } from '@/shared/alarms/settings';
 
 const zone = 'Europe/Zurich';
