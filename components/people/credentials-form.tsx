@@ -5,7 +5,7 @@ import { View } from 'react-native';
 import { call } from '@/components/api';
 import { Body, Button, FormField, showProblem } from '@/components/ui';
 import { signIn, type Me } from '@/shared/contracts/people';
-import { takeEarlyForm, type EarlyForm } from './early-form';
+import { findEarlyForm, type EarlyForm } from './early-form';
 
 interface CredentialsFormProps {
   /** Given when the person is known and only the session ended. */
@@ -28,13 +28,14 @@ export function CredentialsForm({ email, onSignedIn }: CredentialsFormProps) {
   });
   const send = () => void submit();
   const takeOver = useEffectEvent((early: EarlyForm) => {
-    const { email: typed, password } = early.values();
-    if (typed !== '') setValue('email', typed);
-    if (password !== '') setValue('password', password);
+    const typed = early.take();
+    if (typed === null) return;
+    if (typed.email !== '') setValue('email', typed.email);
+    if (typed.password !== '') setValue('password', typed.password);
     if (early.focused !== null) setFocus(early.focused);
-    if (early.pressed()) send();
+    if (typed.pressed) send();
   });
-  const [early] = useState(takeEarlyForm);
+  const [early] = useState(findEarlyForm);
   useLayoutEffect(() => {
     if (early !== null) takeOver(early);
   }, [early]);
