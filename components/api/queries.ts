@@ -9,8 +9,8 @@ type LabParams<R extends RouteContract> = Omit<ParamsOf<R>, 'labId'>;
 interface LabQueryInput<R extends RouteContract> {
   params?: LabParams<R>;
   query?: QueryOf<R>;
-  /** Ask again after so many ms while the page is seen. */
-  everyMs?: number;
+  /** Ask again after so many ms while the page is seen; or what decides that of the last answer. */
+  everyMs?: number | ((answer: CallResult<R> | undefined) => number | false);
   enabled?: boolean;
 }
 
@@ -27,10 +27,11 @@ const withLab = <R extends RouteContract>(labId: string, params: LabParams<R> | 
 /** Reads a route of the present lab; `data` holds the body and the ETag. */
 export function useLabQuery<R extends RouteContract>(route: R, input: LabQueryInput<R> = {}): UseQueryResult<CallResult<R>> {
   const { labId } = useLab();
+  const { everyMs = false } = input;
   return useQuery({
     queryKey: [...labKey(labId, route), input.params ?? null, input.query ?? null],
     queryFn: ({ signal }) => call(route, { params: withLab<R>(labId, input.params), query: input.query, signal }),
-    refetchInterval: input.everyMs ?? false,
+    refetchInterval: typeof everyMs === 'function' ? ({ state }) => everyMs(state.data) : everyMs,
     enabled: input.enabled ?? true,
   });
 }

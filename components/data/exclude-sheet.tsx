@@ -1,7 +1,7 @@
 import { useState } from 'react';
 import { View } from 'react-native';
-import { fieldErrors, useLab, useLabMutation, wordsOf } from '@/components/api';
-import { Body, Button, Field, Label, ProblemNotice, Sheet } from '@/components/ui';
+import { useLab, useLabMutation } from '@/components/api';
+import { Body, Field, Label, ReasonSheet } from '@/components/ui';
 import { makeExclusion, withdrawExclusion, type ExclusionView } from '@/shared/contracts/exclusions';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { formatClock, zoneName } from '@/shared/lib/format-time';
@@ -26,30 +26,22 @@ interface ExcludeSheetProps {
 export function ExcludeSheet({ runId, step, title, onClose, onDone }: ExcludeSheetProps) {
   const { timeZone } = useLab();
   const [typed, setTyped] = useState(() => wholeOf(step));
-  const [reason, setReason] = useState('');
   const exclude = useLabMutation(makeExclusion, () => {
     onDone();
     onClose();
   });
   const { stretch, errors } = partOf(step, typed);
-  const said = reason.trim();
   return (
-    <Sheet
-      open
+    <ReasonSheet
       title={title}
+      act="Exclude"
+      keptIn="in the archive and in the audit trail"
+      sending={exclude}
+      failed="It was not excluded"
+      ready={stretch !== null}
+      onSend={(reason) => stretch !== null && exclude.mutate({ params: { runId }, body: { ...stretch, reason } })}
       onClose={onClose}
-      testID="exclude-sheet"
-      footer={
-        <Button
-          kind="primary"
-          size="action"
-          label="Exclude"
-          busy={exclude.isPending}
-          disabled={stretch === null || said.length < 3}
-          onPress={() => stretch !== null && exclude.mutate({ params: { runId }, body: { ...stretch, reason: said } })}
-          testID="exclude-send"
-        />
-      }
+      testID="exclude"
     >
       <Body tone="dim">
         Evaluations from now on do without these samples, and say so. A dwell that loses more than half of its samples does not count.
@@ -84,58 +76,31 @@ export function ExcludeSheet({ runId, step, title, onClose, onDone }: ExcludeShe
           ? 'Seconds after the beginning of the step.'
           : `Seconds after the beginning of the step: ${stretchWords(stretch, timeZone)}, ${zoneName(timeZone)}.`}
       </Label>
-      <Field
-        label="Why"
-        value={reason}
-        onChange={setReason}
-        error={fieldErrors(exclude.error)['reason']}
-        hint="In a few words; kept with your name, in the archive and in the audit trail."
-        testID="exclude-reason"
-      />
-      {exclude.isError ? <ProblemNotice title="It was not excluded" {...wordsOf(exclude.error)} /> : null}
-    </Sheet>
+    </ReasonSheet>
   );
 }
 
 /** Withdraws an exclusion, with a reason. */
 export function WithdrawSheet({ exclusion, onClose, onDone }: { exclusion: ExclusionView; onClose: () => void; onDone: () => void }) {
   const { timeZone } = useLab();
-  const [reason, setReason] = useState('');
   const withdraw = useLabMutation(withdrawExclusion, () => {
     onDone();
     onClose();
   });
-  const said = reason.trim();
   return (
-    <Sheet
-      open
+    <ReasonSheet
       title="Withdraw the exclusion"
+      act="Withdraw"
+      keptIn="here and in the audit trail"
+      sending={withdraw}
+      failed="It was not withdrawn"
+      onSend={(reason) => withdraw.mutate({ params: { exclusionId: exclusion.id }, body: { reason } })}
       onClose={onClose}
-      testID="withdraw-sheet"
-      footer={
-        <Button
-          kind="primary"
-          size="action"
-          label="Withdraw"
-          busy={withdraw.isPending}
-          disabled={said.length < 3}
-          onPress={() => withdraw.mutate({ params: { exclusionId: exclusion.id }, body: { reason: said } })}
-          testID="withdraw-send"
-        />
-      }
+      testID="withdraw"
     >
       <Body tone="dim">
         Evaluations from now on use the samples of {stretchWords(exclusion, timeZone)} again. The exclusion stays listed as withdrawn.
       </Body>
-      <Field
-        label="Why"
-        value={reason}
-        onChange={setReason}
-        error={fieldErrors(withdraw.error)['reason']}
-        hint="In a few words; kept with your name, here and in the audit trail."
-        testID="withdraw-reason"
-      />
-      {withdraw.isError ? <ProblemNotice title="It was not withdrawn" {...wordsOf(withdraw.error)} /> : null}
-    </Sheet>
+    </ReasonSheet>
   );
 }

@@ -28,7 +28,7 @@ import { useEvaluation, useEvaluations } from './use-evaluations';
 export function EvaluationScreen() {
   const { runId } = useLocalSearchParams<{ runId: string }>();
   const run = useLabQuery(getRun, { params: { runId } });
-  const evaluations = useEvaluations(runId);
+  const evaluations = useEvaluations(runId, run.data?.data.endedAt ?? null);
   const [chosen, setChosen] = useState<string | null>(null);
   const listed = evaluations.allDone.find(({ id }) => id === chosen) ?? evaluations.done;
   const full = useEvaluation(listed?.id ?? null);
@@ -59,7 +59,14 @@ export function EvaluationScreen() {
       panel={panel}
       back={back}
       choice={<Choice evaluations={evaluations.allDone} shown={listed.id} onChoose={setChosen} />}
-      freeze={<FreezePanel evaluation={listed} recomputation={evaluations.recomputationOf(listed.id)} onChanged={evaluations.refresh} />}
+      freeze={
+        <FreezePanel
+          evaluation={listed}
+          recomputation={evaluations.recomputationOf(listed.id)}
+          rig={view.rig}
+          onChanged={evaluations.refresh}
+        />
+      }
     />
   );
 }

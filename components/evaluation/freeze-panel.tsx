@@ -1,9 +1,10 @@
 import { useState } from 'react';
 import { View } from 'react-native';
-import { fieldErrors, useLab, useLabMutation, useMay, wordsOf } from '@/components/api';
-import { Body, Button, Field, Label, Panel, ProblemNotice, Section, Sheet } from '@/components/ui';
+import { useLab, useLabMutation, useMay, wordsOf } from '@/components/api';
+import { Body, Button, Label, Panel, ProblemNotice, ReasonSheet, Section } from '@/components/ui';
 import { freezeEvaluation, recomputeEvaluation, type ListedEvaluation } from '@/shared/contracts/evaluations';
 import { formatDayAndClock } from '@/shared/lib/format-time';
+import type { RigDocument } from '@/shared/rig/document';
 import { softwareWords } from './evaluation-words';
 import { RecomputationPanel } from './recomputation-panel';
 import { atWork } from './use-evaluations';
@@ -12,15 +13,17 @@ interface FreezePanelProps {
   evaluation: ListedEvaluation;
   /** The newest recomputation of it. */
   recomputation: ListedEvaluation | null;
+  /** As it was evaluated. */
+  rig: RigDocument;
   onChanged: () => void;
 }
 
 /** Freezes an evaluation for good; of a frozen one it tells who did it and why, and whether computing it again gives the same. */
-export function FreezePanel({ evaluation, recomputation, onChanged }: FreezePanelProps) {
+export function FreezePanel(props: FreezePanelProps) {
+  const { evaluation, onChanged } = props;
   const may = useMay('evaluate');
   const [asks, setAsks] = useState(false);
-  if (evaluation.frozen !== null)
-    return <Frozen evaluation={evaluation} frozen={evaluation.frozen} recomputation={recomputation} onChanged={onChanged} />;
+  if (evaluation.frozen !== null) return <Frozen {...props} frozen={evaluation.frozen} />;
   return (
     <View className="flex-row flex-wrap items-center gap-3">
       <Button label="Freeze this evaluation" disabled={!may.ok} onPress={() => setAsks(true)} testID="freeze" />
@@ -36,7 +39,7 @@ export function FreezePanel({ evaluation, recomputation, onChanged }: FreezePane
 
 type FrozenProps = FreezePanelProps & { frozen: NonNullable<ListedEvaluation['frozen']> };
 
-function Frozen({ evaluation, frozen, recomputation, onChanged }: FrozenProps) {
+function Frozen({ evaluation, frozen, recomputation, rig, onChanged }: FrozenProps) {
   const may = useMay('evaluate');
   const { timeZone } = useLab();
   const recompute = useLabMutation(recomputeEvaluation, onChanged);
@@ -49,7 +52,7 @@ function Frozen({ evaluation, frozen, recomputation, onChanged }: FrozenProps) {
           Frozen {formatDayAndClock(Date.parse(frozen.at), timeZone)} by {frozen.by}. {softwareWords(evaluation.software)}.
         </Label>
         {recompute.isError ? <ProblemNotice title="It is not computed again" {...wordsOf(recompute.error)} /> : null}
-        {recomputation === null ? null : <RecomputationPanel frozen={evaluation} recomputation={recomputation} />}
+        {recomputation === null ? null : <RecomputationPanel frozen={evaluation} recomputation={recomputation} rig={rig} />}
         <View className="flex-row flex-wrap items-center gap-3">
           <Button
             label="Recompute and compare"
@@ -71,40 +74,22 @@ function Frozen({ evaluation, frozen, recomputation, onChanged }: FrozenProps) {
 
 /** Asks for the reason; freezing is what its one button does. */
 function FreezeSheet({ evaluationId, onClose, onDone }: { evaluationId: string; onClose: () => void; onDone: () => void }) {
-  const [reason, setReason] = useState('');
   const freeze = useLabMutation(freezeEvaluation, () => {
     onDone();
     onClose();
   });
-  const said = reason.trim();
   return (
-    <Sheet
-      open
+    <ReasonSheet
       title="Freeze this evaluation"
+      act="Freeze for good"
+      keptIn="here and in the audit trail"
+      sending={freeze}
+      failed="It was not frozen"
+      onSend={(reason) => freeze.mutate({ params: { evaluationId }, body: { reason } })}
       onClose={onClose}
-      testID="freeze-sheet"
-      footer={
-        <Button
-          kind="primary"
-          size="action"
-          label="Freeze for good"
-          busy={freeze.isPending}
-          disabled={said.length < 3}
-          onPress={() => freeze.mutate({ params: { evaluationId }, body: { reason: said } })}
-          testID="freeze-send"
-        />
-      }
+      testID="freeze"
     >
       <Body tone="dim">It stays as it is, and nobody can undo that. The run can be evaluated again, beside it.</Body>
-      <Field
-        label="Why"
-        value={reason}
-        onChange={setReason}
-        error={fieldErrors(freeze.error)['reason']}
-        hint="In a few words; kept with your name, here and in the audit trail."
-        testID="freeze-reason"
-      />
-      {freeze.isError ? <ProblemNotice title="It was not frozen" {...wordsOf(freeze.error)} /> : null}
-    </Sheet>
+    </ReasonSheet>
   );
 }

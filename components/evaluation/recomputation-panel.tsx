@@ -5,15 +5,18 @@ import type { ListedEvaluation } from '@/shared/contracts/evaluations';
 import { compareResults, isMeasured, type ComparedValue, type ResultDifference } from '@/shared/evaluation/compare-results';
 import { formatDayAndClock } from '@/shared/lib/format-time';
 import { formatUncertain } from '@/shared/lib/format-uncertain';
+import type { RigDocument } from '@/shared/rig/document';
 import { softwareWords } from './evaluation-words';
 
 interface RecomputationPanelProps {
   frozen: ListedEvaluation;
   recomputation: ListedEvaluation;
+  /** As it was evaluated. */
+  rig: RigDocument;
 }
 
 /** What came out when a frozen evaluation was computed again, place by place where it differs. */
-export function RecomputationPanel({ frozen, recomputation }: RecomputationPanelProps) {
+export function RecomputationPanel({ frozen, recomputation, rig }: RecomputationPanelProps) {
   const { timeZone } = useLab();
   if (recomputation.state === 'failed')
     return <ProblemNotice title="It could not be computed again" detail={recomputation.error ?? 'No reason was given.'} />;
@@ -23,7 +26,7 @@ export function RecomputationPanel({ frozen, recomputation }: RecomputationPanel
         <Label>Being computed again. It goes on if you leave this page.</Label>
       </View>
     );
-  const differences = compareResults(frozen.result, recomputation.result);
+  const differences = compareResults(frozen.result, recomputation.result, rig);
   return (
     <View className="gap-2" testID="comparison">
       <Body strong>{differences.length === 0 ? 'No difference' : headOf(differences)}</Body>

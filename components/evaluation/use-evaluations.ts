@@ -1,21 +1,27 @@
 import { useQueryClient } from '@tanstack/react-query';
-import { labKey, useLab, useLabMutation, useLabQuery } from '@/components/api';
+import { labKey, serverNowMs, useLab, useLabMutation, useLabQuery } from '@/components/api';
 import { getEvaluation, listEvaluations, startEvaluation, type ListedEvaluation } from '@/shared/contracts/evaluations';
 
 const pollMs = 1000;
-/** A run that is over is evaluated by the server itself, minutes later. */
+/** A run that is over is evaluated by the server itself, minutes later: so often and so long after its end the first is looked for. */
 const firstPollMs = 4000;
+const firstWithinMs = 600_000;
 
 export const atWork = (state: string | undefined) => state === 'queued' || state === 'running';
 
-/** The newest evaluation of a run, asked for again while it is at work, and the way to start one. */
-export function useEvaluations(runId: string) {
+/** The newest evaluation of a run, asked for again while it is at work or soon to be, and the way to start one. */
+export function useEvaluations(runId: string, endedAt: string | null) {
   const { labId } = useLab();
   const queries = useQueryClient();
-  const first = useLabQuery(listEvaluations, { params: { runId } });
-  const busy = first.data?.data.items.some(({ state }) => atWork(state)) ?? false;
-  const none = first.data?.data.items.length === 0;
-  const list = useLabQuery(listEvaluations, { params: { runId }, ...(busy ? { everyMs: pollMs } : none ? { everyMs: firstPollMs } : {}) });
+  const justEnded = () => endedAt !== null && serverNowMs() - Date.parse(endedAt) < firstWithinMs;
+  const list = useLabQuery(listEvaluations, {
+    params: { runId },
+    everyMs: (answer) => {
+      const items = answer?.data.items ?? [];
+      if (items.some(({ state }) => atWork(state))) return pollMs;
+      return items.length === 0 && justEnded() ? firstPollMs : false;
+    },
+  });
   const refresh = () => void queries.invalidateQueries({ queryKey: labKey(labId, listEvaluations) });
   const start = useLabMutation(startEvaluation, refresh);
   const items = list.data?.data.items ?? [];

@@ -1,7 +1,7 @@
 import { View } from 'react-native';
 import { Body, Icon, Label, Num, Panel, type IconName } from '@/components/ui';
 import type { MorningSheet, MorningTick } from '@/shared/contracts/morning';
-import { formatDuration } from '@/shared/lib/format-duration';
+import { lostWords } from '@/shared/morning/words';
 
 const marks: Record<'yes' | 'no' | 'open', { icon: IconName; tone: 'good' | 'danger' | 'dim'; said: string }> = {
   yes: { icon: 'tick', tone: 'good', said: 'right' },
@@ -30,17 +30,17 @@ export function Believe({ ticks }: { ticks: readonly MorningTick[] }) {
 
 /** How many dwells are good, and where the rest of the time went. */
 export function GoodDwells({ dwells, lost }: Pick<MorningSheet, 'dwells' | 'lost'>) {
-  const total = lost.reduce((sum, { s }) => sum + s, 0);
+  const { total, causes } = lostWords(lost);
   return (
     <View className="gap-0.5" testID="good-dwells">
       <Body>
         <Num size={17}>
           {dwells.good} of {dwells.planned}
         </Num>{' '}
-        dwells are good
-        {lost.length === 0 ? '' : `; ${formatDuration(total)} lost`}
+        dwells are good{causes === '' ? ', ' : '; '}
+        {total}
       </Body>
-      {lost.length === 0 ? null : <Label>{lost.map(({ words, s }) => `${words} ${formatDuration(s)}`).join(' · ')}</Label>}
+      {causes === '' ? null : <Label>{causes}</Label>}
     </View>
   );
 }

@@ -7,7 +7,7 @@ import { formatDeflectionUncertain } from '@/shared/lib/format-angle';
 import { formatPercent, formatSignificant } from '@/shared/lib/format-number';
 import { formatDay } from '@/shared/lib/format-time';
 import { formatUncertain } from '@/shared/lib/format-uncertain';
-import { beside } from './beside';
+import { differenceInU, meanBefore, qualityOf } from '@/shared/morning/earlier-nights';
 
 const inMrad = ({ value, u }: MorningNight['reversal_rad']) => ({ value: value * 1e3, u: u === null ? null : u * 1e3 });
 
@@ -30,7 +30,7 @@ export function NearFar({ sheet, rehearsal, timeZone }: { sheet: MorningSheet; r
 }
 
 function EarlierNight({ night, tonight, timeZone }: { night: MorningNight; tonight: MorningNight; timeZone: string }) {
-  const off = night.control !== tonight.control ? null : beside(tonight.reversal_rad, night.reversal_rad);
+  const off = night.control !== tonight.control ? null : differenceInU(tonight.reversal_rad, night.reversal_rad);
   return (
     <View className="flex-row flex-wrap items-baseline gap-x-3">
       <Link href={`/runs/${night.runId}` as Href} className="underline">
@@ -49,23 +49,13 @@ const inMicro = ({ value, u }: { value: number; u: number | null }) => ({
   u: u === null ? null : u * 1e6,
   unit: 'µrad/h',
 });
-const mean = (values: readonly number[]) => values.reduce((sum, value) => sum + value, 0) / values.length;
 
 /** Period, quality and torsion constant of this night beside the mean of those before. */
 export function Pendulum({ sheet: { tonight, earlier, drift } }: { sheet: MorningSheet }) {
   if (tonight?.period_s == null) return null;
   const nights = earlier.filter(({ control }) => !control);
-  const before = (pick: (night: MorningNight) => number | null) => {
-    const values = nights.map(pick).filter((value) => value !== null);
-    return values.length === 0 ? null : mean(values);
-  };
-  const qOf = ({ period_s, decayTime_s }: MorningNight) =>
-    period_s === null || decayTime_s === null ? null : (Math.PI * decayTime_s.value) / period_s.value;
-  const q = qOf(tonight);
-  const qU =
-    q === null || tonight.decayTime_s?.u == null
-      ? null
-      : q * Math.hypot(tonight.decayTime_s.u / tonight.decayTime_s.value, (tonight.period_s.u ?? 0) / tonight.period_s.value);
+  const before = (pick: Parameters<typeof meanBefore>[1]) => meanBefore(earlier, pick);
+  const quality = qualityOf(tonight);
   return (
     <Section
       title="Pendulum"
@@ -78,13 +68,13 @@ export function Pendulum({ sheet: { tonight, earlier, drift } }: { sheet: Mornin
       }
     >
       <Panel className="flex-row flex-wrap gap-x-10 gap-y-3" testID="pendulum">
-        <Beside label="damped period" now={{ ...tonight.period_s, unit: 's' }} before={before(({ period_s }) => period_s?.value ?? null)} />
-        {q === null ? null : <Beside label="quality factor Q" now={{ value: q, u: qU, unit: '' }} before={before(qOf)} />}
+        <Beside label="damped period" now={{ ...tonight.period_s, unit: 's' }} before={before(({ period_s }) => period_s)} />
+        {quality === null ? null : <Beside label="quality factor Q" now={{ ...quality, unit: '' }} before={before(qualityOf)} />}
         {tonight.kappa_N_m === null ? null : (
           <Beside
             label="torsion constant κ"
             now={{ ...tonight.kappa_N_m, unit: 'N.m/rad' }}
-            before={before(({ kappa_N_m }) => kappa_N_m?.value ?? null)}
+            before={before(({ kappa_N_m }) => kappa_N_m)}
           />
         )}
         {drift === null ? null : (

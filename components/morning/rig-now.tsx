@@ -1,7 +1,7 @@
 import { View } from 'react-native';
 import { useLabQuery } from '@/components/api';
 import { useNow } from '@/components/runs/use-now';
-import { Body, Icon, Label, Panel, type IconName, type Tone } from '@/components/ui';
+import { Body, Icon, Label, Panel, type IconName } from '@/components/ui';
 import { getRig } from '@/shared/contracts/rigs';
 import { mayGoIn, type MayGoIn } from '@/shared/morning/may-go-in';
 
@@ -33,7 +33,7 @@ export function RigNow({ rigId, timeZone }: { rigId: string; timeZone: string })
           May I go in? {title}
         </Body>
       </View>
-      <Label tone={'text' satisfies Tone}>{stand.words}</Label>
+      <Label tone="text">{stand.words}</Label>
       {stand.facts.length === 0 ? null : <Label testID="rig-now">{stand.facts.join(' · ')}</Label>}
     </Panel>
   );

@@ -34,7 +34,7 @@ export function ResultScreen({ view }: { view: RunView }) {
   const { labId, timeZone } = useLab();
   const steps = useLabQuery(listSteps, { params: { runId: view.id } });
   const rows = steps.data?.data.items ?? [];
-  const evaluations = useEvaluations(view.id);
+  const evaluations = useEvaluations(view.id, view.endedAt);
   const result = evaluations.done?.result ?? null;
   const morning = useMorning(view.id, evaluations.done?.id ?? null);
   const sheet = morning.data?.data ?? null;

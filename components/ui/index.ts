@@ -8,6 +8,7 @@ export { Icon, type IconName } from './icon';
 export { PressAndKeep } from './press-and-keep';
 export { Panel, Row, Section } from './panel';
 export { fileNameOf, saveTextFile } from './save-file';
+export { ReasonSheet } from './reason-sheet';
 export { Screen } from './screen';
 export { Sheet } from './sheet';
 export { Empty, Loading, Offline, ProblemNotice } from './states';

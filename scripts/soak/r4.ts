@@ -77,8 +77,19 @@ async function round(asked: Asked, database: CrashingDatabase, of: { number: num
     }
     await pause(100);
   }
-  if (!holds) return;
-  await lab.resume(runId);
+  if (holds) await resumes(asked, began + SETTLING_MS);
+}
+
+/** A person who is told that the database does not answer yet tries again. */
+async function resumes({ lab, runId }: Asked, untilMs: number): Promise<void> {
+  for (;;) {
+    try {
+      return await lab.resume(runId);
+    } catch (error) {
+      if (!String(error).includes('does not answer') || performance.now() > untilMs) throw error;
+      await pause(500);
+    }
+  }
 }
 
 async function rounds(setting: ServerSetting, cookie: string, of: { database: CrashingDatabase; count: number }): Promise<Findings> {

@@ -6,11 +6,12 @@ import { channelsOfRun, countSamples, readEvents, readSteps, type RunRecord } fr
 import { stepNotesOf } from '../store/step-notes';
 import { isoOf } from './maker';
 import { ProblemError } from './problem-error';
+import { windowOf } from './run-window';
 import { softwareVersion } from './software';
 import type { Services } from './services';
 
 /** How a run ended, as archives name it. */
-function outcomeOf(run: RunRecord): BuildArchiveInput['run']['outcome'] {
+export function outcomeOf(run: RunRecord): BuildArchiveInput['run']['outcome'] {
   if (run.outcome !== null) return run.outcome;
   return run.state === 'finished' || run.state === 'stopped' ? run.state : 'failed';
 }
@@ -23,7 +24,7 @@ export function assertEnded(run: RunRecord): void {
 
 /** Channels of a run that have samples within it, with their samples. */
 async function seriesOf(services: Services, run: RunRecord): Promise<ChannelSeries[]> {
-  const window = { fromUtcMs: run.startedAt ?? run.createdAt, toUtcMs: run.endedAt ?? services.clock.utcMs() };
+  const window = windowOf(run, services);
   const series: ChannelSeries[] = [];
   for (const channel of await channelsOfRun(services.database.db, run)) {
     if ((await countSamples(services.database, { ...window, labId: run.labId, channelId: channel.id })) === 0) continue;

@@ -1,11 +1,12 @@
 import type { ChannelRecord } from '../store/imports';
 import { channelsOfRun, countSamples, type RunRecord } from '../store/runs-read';
 import { ProblemError } from './problem-error';
+import { windowOf } from './run-window';
 import type { Services } from './services';
 
 /** Deflection channels with samples within a run, with their number. */
 export async function filledDeflection(services: Services, run: RunRecord): Promise<(ChannelRecord & { samples: number })[]> {
-  const window = { fromUtcMs: run.startedAt ?? run.createdAt, toUtcMs: run.endedAt ?? services.clock.utcMs() };
+  const window = windowOf(run, services);
   const filled: (ChannelRecord & { samples: number })[] = [];
   for (const channel of await channelsOfRun(services.database.db, run)) {
     if (channel.role !== 'deflection') continue;

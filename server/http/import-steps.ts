@@ -8,6 +8,7 @@ import type { RunRecord } from '@/server/store/runs-read';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { isoOrNull } from './maker';
 import { ProblemError } from './problem-error';
+import { startUtcMsOf } from './run-window';
 import type { Services } from './services';
 
 /** Refuses a mapping that cannot be meant, whatever the file holds. */
@@ -56,7 +57,7 @@ export async function readImport(
 /** How the data lie against the run, in words, and the share of the run they cover. */
 function overlapOf(reading: CsvReading, run: RunRecord, nowUtcMs: number): { share: number; words: string } {
   const { firstUtcMs, lastUtcMs } = reading;
-  const from = run.startedAt ?? run.createdAt;
+  const from = startUtcMsOf(run);
   const to = Math.max(run.endedAt ?? nowUtcMs, from + 1);
   if (firstUtcMs === null || lastUtcMs === null) return { share: 0, words: 'no row could be read' };
   const common = Math.min(to, lastUtcMs) - Math.max(from, firstUtcMs);

@@ -9,6 +9,7 @@ import { listEvaluations } from '../store/evaluations';
 import { nightsBefore, rangeAndMeans, spacingOf } from '../store/nights';
 import { channelsOfRun, readEvents, readSteps, type RunRecord } from '../store/runs-read';
 import { filledDeflection } from './channel-to-evaluate';
+import { startUtcMsOf, windowOf } from './run-window';
 import type { Services } from './services';
 
 const nightsShown = 5;
@@ -17,7 +18,7 @@ const nightsShown = 5;
 export async function morningOf(services: Services, run: RunRecord): Promise<MorningSheet> {
   const { db } = services.database;
   const own = { labId: run.labId, runId: run.id };
-  const startedAtUtcMs = run.startedAt ?? run.createdAt;
+  const { fromUtcMs: startedAtUtcMs, toUtcMs: endUtcMs } = windowOf(run, services);
   const events = await readEvents(db, own, { afterSeq: 0 });
   const rows = await readSteps(db, own);
   const evaluations = (await listEvaluations(db, run.labId, run.id)).filter(({ recomputes }) => recomputes === null);
@@ -27,7 +28,7 @@ export async function morningOf(services: Services, run: RunRecord): Promise<Mor
     runId: run.id,
     rig: run.start.rig,
     startedAtUtcMs,
-    endUtcMs: run.endedAt ?? services.clock.utcMs(),
+    endUtcMs,
     plan: planTimeline(run.start, { utcMs: startedAtUtcMs, angleDeg }),
     rows,
     events,
@@ -50,7 +51,7 @@ async function coverOf(services: Services, run: RunRecord, wanted: string | null
   const filled = await filledDeflection(services, run);
   const channel = filled.find(({ name }) => name === wanted) ?? filled[0];
   if (channel === undefined) return null;
-  const window = { fromUtcMs: run.startedAt ?? run.createdAt, toUtcMs: run.endedAt ?? services.clock.utcMs() };
+  const window = windowOf(run, services);
   const { longestGapS, usualS } = await spacingOf(services.database, { ...window, labId: run.labId, channelId: channel.id });
   const everyS = channel.rateHz === null ? usualS : 1 / channel.rateHz;
   return {
@@ -61,7 +62,7 @@ async function coverOf(services: Services, run: RunRecord, wanted: string | null
 
 /** Channels of the surroundings with samples within the run. */
 async function roomChannels(services: Services, run: RunRecord, rows: readonly StepRow[]): Promise<RoomChannel[]> {
-  const window = { labId: run.labId, fromUtcMs: run.startedAt ?? run.createdAt, toUtcMs: run.endedAt ?? services.clock.utcMs() };
+  const window = { labId: run.labId, ...windowOf(run, services) };
   const spans = rows.flatMap(({ seq, kind, startUtcMs, endUtcMs }) =>
     kind === 'dwell' && endUtcMs !== null ? [{ seq, fromUtcMs: startUtcMs, toUtcMs: endUtcMs }] : [],
   );
@@ -80,7 +81,7 @@ async function earlierNights(services: Services, run: RunRecord): Promise<Mornin
     labId: run.labId,
     rigId: run.rigId,
     massSetId: run.massSetId,
-    startedAtUtcMs: run.startedAt ?? run.createdAt,
+    startedAtUtcMs: startUtcMsOf(run),
   });
   const control = nights.find((night) => night.control);
   return [...nights.filter((night) => !night.control).slice(0, nightsShown), ...(control === undefined ? [] : [control])];

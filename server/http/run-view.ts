@@ -7,6 +7,7 @@ import { findRun, readSteps, type RunListRow, type RunRecord } from '../store/ru
 import { isoOf, isoOrNull } from './maker';
 import { positionViewOf } from './position-view';
 import { notFound } from './problem-error';
+import { startUtcMsOf } from './run-window';
 import type { Services } from './services';
 
 /** @throws ProblemError where the lab has no such run */
@@ -112,7 +113,7 @@ function waitingViewOf({ kind, text, givesUpUtcMs, otherwise, firstLookUtcMs, fo
 }
 
 async function factsOfStored(services: Services, run: RunRecord): Promise<RunFacts> {
-  const dwellsPlanned = plannedDwells(run.start, run.startedAt ?? run.createdAt);
+  const dwellsPlanned = plannedDwells(run.start, startUtcMsOf(run));
   const snapshot = restored(run.snapshot, run.chartVersion);
   if (snapshot !== null)
     return factsOf({

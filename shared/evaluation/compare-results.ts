@@ -1,4 +1,6 @@
 import { UNIT_OF_G } from '../lib/format-number';
+import type { RigDocument } from '../rig/document';
+import { unitOfInput } from './input-words';
 import type { EvaluationResult } from './result';
 
 /** A value with its standard uncertainty (k = 1), where the result has one for it; or another value of the result, null for nothing. */
@@ -15,21 +17,25 @@ export interface ResultDifference {
   change: number | null;
 }
 
-type Leaves = Map<string, ComparedValue>;
+/** What a result says at each of its places, and the units that it names itself or that the rig gives to the lines of the budget. */
+interface Leaves {
+  values: Map<string, ComparedValue>;
+  units: Map<string, string>;
+}
 
 /**
  * Every place in which two results of the evaluation differ, G first; empty where they are the same to the last bit. Numbers are
- * compared exactly, for the same program makes the same numbers of the same data.
+ * compared exactly, for the same program makes the same numbers of the same data. `rig` is the one that was evaluated.
  */
-export function compareResults(before: EvaluationResult, after: EvaluationResult): ResultDifference[] {
-  const was = leavesOf(before);
-  const is = leavesOf(after);
+export function compareResults(before: EvaluationResult, after: EvaluationResult, rig: RigDocument): ResultDifference[] {
+  const { values: was, units: unitsWere } = leavesOf(before, rig);
+  const { values: is, units } = leavesOf(after, rig);
   const differences: ResultDifference[] = [];
   for (const path of new Set([...was.keys(), ...is.keys()])) {
     const [one, other] = [was.get(path) ?? null, is.get(path) ?? null];
     if (isSame(one, other)) continue;
     const change = isMeasured(one) && isMeasured(other) ? other.value - one.value : null;
-    differences.push({ path, unit: unitOfPath(path), before: one, after: other, change });
+    differences.push({ path, unit: units.get(path) ?? unitsWere.get(path) ?? unitOfPath(path), before: one, after: other, change });
   }
   return differences.sort((a, b) => Number(b.path === 'G') - Number(a.path === 'G'));
 }
@@ -40,24 +46,30 @@ export const isMeasured = (value: ComparedValue): value is { value: number; u: n
 const isSame = (a: ComparedValue, b: ComparedValue): boolean =>
   isMeasured(a) && isMeasured(b) ? a.value === b.value && a.u === b.u : a === b;
 
-function leavesOf(result: EvaluationResult): Leaves {
-  const leaves: Leaves = new Map();
+function leavesOf(result: EvaluationResult, rig: RigDocument): Leaves {
+  const leaves: Leaves = { values: new Map(), units: new Map() };
   collect(leaves, '', result);
+  for (const { input } of result.budget ?? []) {
+    const [path, unit] = [`budget[${input}]`, unitOfInput(input, rig)];
+    leaves.units.set(path, unit).set(`${path}.sensitivity`, unit === '' ? UNIT_OF_G : `${UNIT_OF_G} per ${unit}`);
+  }
   return leaves;
 }
 
 function collect(leaves: Leaves, path: string, node: unknown): void {
   if (Array.isArray(node)) node.forEach((item: unknown, index) => collect(leaves, `${path}[${nameOf(item) ?? index}]`, item));
-  else if (typeof node === 'number') leaves.set(path, { value: node, u: null });
-  else if (typeof node === 'string' || typeof node === 'boolean' || node === null) leaves.set(path, node);
+  else if (typeof node === 'number') leaves.values.set(path, { value: node, u: null });
+  else if (typeof node === 'string' || typeof node === 'boolean' || node === null) leaves.values.set(path, node);
   else if (typeof node === 'object') collectObject(leaves, path, node as Record<string, unknown>);
 }
 
 /** A value and its u are one leaf, however many other facts stand beside them. */
 function collectObject(leaves: Leaves, path: string, { value, u, ...others }: Record<string, unknown>): void {
   const rest: Record<string, unknown> = others;
-  if (typeof value === 'number') leaves.set(path, { value, u: typeof u === 'number' ? u : null });
-  else Object.assign(rest, value === undefined ? {} : { value }, u === undefined ? {} : { u });
+  if (typeof value === 'number') {
+    leaves.values.set(path, { value, u: typeof u === 'number' ? u : null });
+    if (typeof rest['unit'] === 'string') leaves.units.set(path, rest['unit']);
+  } else Object.assign(rest, value === undefined ? {} : { value }, u === undefined ? {} : { u });
   for (const [key, child] of Object.entries(rest)) collect(leaves, path === '' ? key : `${path}.${key}`, child);
 }
 

@@ -21,7 +21,7 @@ import {
   type ModulationSolution,
   type RotatingPendulum,
 } from './modulation-solution';
-import { fitRotation, harmonicsByPiece, recordOf, type RotationFit, type RotationRecord } from './rotation-fit';
+import { fitRotation, harmonicsByPiece, recordOf, turnsThere, type RotationFit, type RotationRecord } from './rotation-fit';
 import { rotationWindows } from './rotation-windows';
 import type { GSolution } from './solve-g';
 
@@ -255,7 +255,7 @@ function outcomeOf(rig: RigDocument, analysis: Analysis, found: Locked): Modulat
     },
     statistical: scatter === null ? null : { value: solution.bigG, u: scatter.gU, nu: scatter.nu },
     clockOffset: clockU === null ? null : { value: offsetS + solution.latenessS, u: clockU },
-    turns: records.reduce((sum, { rotation }) => sum + rotation.turns, 0),
+    turns: records.reduce((sum, record, i) => sum + turnsThere(record, found.trust[i] ?? null), 0),
     amplitudeRad,
     gOf: (changes) => solvedFor(changes).bigG,
   };

@@ -1,4 +1,4 @@
-import { boxAverage, type BoxAverages } from '../statistics/box-average';
+import { boxAverage, medianInterval, type BoxAverages } from '../statistics/box-average';
 import { leastSquares } from '../statistics/least-squares';
 import { toRad, type ChannelScale } from './channel-scale';
 import type { DwellSamples } from './dwell-samples';
@@ -12,12 +12,23 @@ export const fittedHarmonics = 6;
 const boxesPerCycle = 60;
 /** The record is cut into pieces of whole turns, each with an offset and a slope of its own; at most so many. */
 const mostPieces = 24;
+/** A piece of which less is there tells too little of its own drift and harmonics, and is left out. */
+const leastShare = 0.5;
+
+interface Piece {
+  fromS: number;
+  toS: number;
+  turns: number;
+  /** Samples that it has where none is missing. */
+  whole: number;
+}
 
 /** One rotation's data, averaged, and the columns they are fitted with. */
 export interface RotationRecord {
   rotation: RotationWindow;
   averages: BoxAverages;
-  pieces: number;
+  /** Of whole turns, one after the other. */
+  pieces: Piece[];
   /** Which piece each datum belongs to. */
   pieceOf: Int32Array;
   /** cos 2φ, sin 2φ, cos 4φ, …: averaged over the boxes like the data. */
@@ -32,7 +43,7 @@ export interface RotationFit {
   /** a₁, b₁, a₂, … of cos 2kφ and sin 2kφ, rad. */
   harmonics: Float64Array;
   ringing: [number, number];
-  /** Mean of the pieces' offsets, rad. */
+  /** Mean of the offsets of the pieces that are there, rad. */
   offsetRad: number;
   /** Of the averaged data, rad. */
   residuals: Float64Array;
@@ -61,14 +72,21 @@ export function recordOf(
   const averages = averaged((k) => toRad(scale, reading[k] as number));
   const phi = tS.map((t) => rotation.phiRad(window.fromUtcMs + 1000 * t));
   const phiMiddle = averages.t.map((t) => rotation.phiRad(window.fromUtcMs + 1000 * t));
-  const pieces = Math.min(mostPieces, rotation.turns);
   const lengthS = (window.toUtcMs - window.fromUtcMs) / 1000;
+  const turnsEach = Math.ceil(rotation.turns / mostPieces);
+  const pieceS = (turnsEach * lengthS) / rotation.turns;
+  const everyS = medianInterval(tS);
+  const pieces = Array.from({ length: Math.ceil(rotation.turns / turnsEach) }, (_, i): Piece => {
+    const [fromS, toS] = [i * pieceS, Math.min(lengthS, (i + 1) * pieceS)];
+    const turns = Math.min(turnsEach, rotation.turns - i * turnsEach);
+    return { fromS, toS, turns, whole: (toS - fromS) / everyS };
+  });
   const dying = (t: number, f: (x: number) => number) => Math.exp(-free.gamma * t) * f(free.omega * t);
   return {
     rotation,
     averages,
     pieces,
-    pieceOf: Int32Array.from(averages.t, (t) => Math.min(pieces - 1, Math.max(0, Math.floor((t / lengthS) * pieces)))),
+    pieceOf: Int32Array.from(averages.t, (t) => Math.min(pieces.length - 1, Math.max(0, Math.floor(t / pieceS)))),
     harmonics: harmonicColumns((f, k) => averaged((i) => f(2 * k * (phi[i] as number))).y),
     ringing: [averaged((i) => dying(tS[i] as number, Math.cos)).y, averaged((i) => dying(tS[i] as number, Math.sin)).y],
     atMiddle: {
@@ -88,36 +106,51 @@ export interface FitChoice {
   trust: Float64Array | null;
 }
 
+/** Places of the pieces of which enough is there, so far as it is trusted. */
+function piecesThere({ averages, pieces, pieceOf }: RotationRecord, trust: Float64Array | null): number[] {
+  const samples = new Float64Array(pieces.length);
+  averages.weight.forEach((weight, i) => {
+    const piece = pieceOf[i] as number;
+    samples[piece] = (samples[piece] as number) + weight * (trust?.[i] ?? 1);
+  });
+  return [...pieces.keys()].filter((piece) => (samples[piece] as number) >= leastShare * (pieces[piece] as Piece).whole);
+}
+
+/** Whole turns in the pieces that are there. */
+export const turnsThere = (record: RotationRecord, trust: Float64Array | null): number =>
+  piecesThere(record, trust).reduce((sum, piece) => sum + (record.pieces[piece] as Piece).turns, 0);
+
 /** @throws SingularMatrixError where too little of the record is there */
 export function fitRotation(record: RotationRecord, { y, columns, trust }: FitChoice): RotationFit {
-  const { averages, pieces } = record;
-  const root = averages.weight.map((weight, i) => Math.sqrt(weight * (trust?.[i] ?? 1)));
+  const { averages, pieceOf } = record;
+  const there = piecesThere(record, trust);
+  const root = averages.weight.map((weight, i) => (there.includes(pieceOf[i] as number) ? Math.sqrt(weight * (trust?.[i] ?? 1)) : 0));
   const weighed = (column: Float64Array) => column.map((value, i) => value * (root[i] as number));
-  const drift = Array.from({ length: pieces }, (_, piece) => driftColumns(record, piece)).flat();
+  const drift = there.flatMap((piece) => driftColumns(record, piece));
   const all = [...columns.harmonics, ...columns.ringing, ...drift].map(weighed);
   const { coefficients, residuals } = leastSquares(all, weighed(y));
   const after = 2 * fittedHarmonics;
-  const offsets = Array.from({ length: pieces }, (_, piece) => coefficients[after + 2 + 2 * piece] as number);
+  const offsets = there.map((_, i) => coefficients[after + 2 + 2 * i] as number);
   return {
     harmonics: coefficients.slice(0, after),
     ringing: [coefficients[after] as number, coefficients[after + 1] as number],
-    offsetRad: offsets.reduce((sum, one) => sum + one, 0) / pieces,
+    offsetRad: offsets.reduce((sum, one) => sum + one, 0) / offsets.length,
     residuals: residuals.map((value, i) => (root[i] === 0 ? 0 : value / (root[i] as number))),
   };
 }
 
 /** Offset and slope of one piece, from −1 to 1. */
-function driftColumns({ averages, pieces, pieceOf, rotation: { window } }: RotationRecord, piece: number): [Float64Array, Float64Array] {
-  const pieceS = (window.toUtcMs - window.fromUtcMs) / 1000 / pieces;
+function driftColumns({ averages, pieces, pieceOf }: RotationRecord, piece: number): [Float64Array, Float64Array] {
+  const { fromS, toS } = pieces[piece] as Piece;
   const own = pieceOf.map((one) => (one === piece ? 1 : 0));
-  return [Float64Array.from(own), averages.t.map((t, i) => (own[i] as number) * (2 * (t / pieceS - piece) - 1))];
+  return [Float64Array.from(own), averages.t.map((t, i) => (own[i] as number) * ((2 * (t - fromS)) / (toS - fromS) - 1))];
 }
 
-/** The harmonics of each piece by itself, the ringing taken as the whole record tells it. */
+/** The harmonics of each piece that is there by itself, the ringing taken as the whole record tells it. */
 export function harmonicsByPiece(record: RotationRecord, fit: RotationFit, trust: Float64Array | null): Float64Array[] {
-  const { averages, pieces, pieceOf, harmonics, ringing } = record;
+  const { averages, pieceOf, harmonics, ringing } = record;
   const rest = averages.y.map((y, i) => y - fit.ringing[0] * (ringing[0][i] as number) - fit.ringing[1] * (ringing[1][i] as number));
-  return Array.from({ length: pieces }, (_, piece) => {
+  return piecesThere(record, trust).map((piece) => {
     const own = [...pieceOf.keys()].filter((i) => pieceOf[i] === piece);
     const root = own.map((i) => Math.sqrt((averages.weight[i] as number) * (trust?.[i] ?? 1)));
     const picked = (column: Float64Array) => own.map((i, n) => (column[i] as number) * (root[n] as number));

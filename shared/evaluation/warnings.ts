@@ -68,7 +68,7 @@ export function registrationWarnings({ exclusions }: Archive, { differences }: P
     warnings.push({ code: 'not-as-registered', message: `The evaluation is not the registered one: ${differences.join('; ')}.` });
   if (exclusions.length > 0) {
     const stretches = exclusions.length === 1 ? 'one stretch' : `${exclusions.length} stretches`;
-    const seconds = exclusions.reduce((sum, { startUtcMs, endUtcMs }) => sum + (endUtcMs - startUtcMs) / 1000, 0);
+    const seconds = lengthTogether(exclusions) / 1000;
     warnings.push({
       code: 'excluded-by-hand',
       message: `${differences === null ? 'The' : 'Beside the registered rules the'} samples of ${stretches}, ${seconds.toFixed(0)} s together, were excluded by hand (exclusions.csv).`,
@@ -124,4 +124,14 @@ function clockWarnings(offset: Analysis['clockOffset']): ArchiveWarning[] {
     });
   }
   return warnings;
+}
+
+/** Length of all stretches in ms, what lies in more than one counted once. */
+function lengthTogether(stretches: Archive['exclusions']): number {
+  let [covered, sum] = [-Infinity, 0];
+  for (const { startUtcMs, endUtcMs } of [...stretches].sort((a, b) => a.startUtcMs - b.startUtcMs)) {
+    sum += Math.max(0, endUtcMs - Math.max(startUtcMs, covered));
+    covered = Math.max(covered, endUtcMs);
+  }
+  return sum;
 }

@@ -18,13 +18,19 @@ export function planWords({ plannedEndAt }: Pick<MorningSheet, 'plannedEndAt'>, 
   return `${formatDuration(Math.abs(lateS))} ${lateS > 0 ? 'after' : 'before'} the plan`;
 }
 
-/** `31 of 32 dwells are good; 12 min brought nothing that counts: held 12 min`. */
+/** `31 of 32 dwells are good; 12 min brought nothing that counts: held`. */
 export function dwellWords({ dwells, lost }: Pick<MorningSheet, 'dwells' | 'lost'>): string {
   const good = `${dwells.good} of ${dwells.planned} dwells are good`;
-  if (lost.length === 0) return `${good}, no time was lost`;
+  const { total, causes } = lostWords(lost);
+  return causes === '' ? `${good}, ${total}` : `${good}; ${total}: ${causes}`;
+}
+
+/** How long nothing came that counts, and of what; no causes where no time was lost. */
+export function lostWords(lost: MorningSheet['lost']): { total: string; causes: string } {
+  if (lost.length === 0) return { total: 'no time was lost', causes: '' };
   const total = lost.reduce((sum, { s }) => sum + s, 0);
   const causes = lost.map(({ words, s }) => (lost.length === 1 ? words : `${words} ${formatDuration(s)}`)).join(', ');
-  return `${good}; ${formatDuration(total)} brought nothing that counts: ${causes}`;
+  return { total: `${formatDuration(total)} brought nothing that counts`, causes };
 }
 
 const marks = new Map([

@@ -12,6 +12,7 @@ import { assertMapping, checkViewOf, readImport } from '../import-steps';
 import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
+import { windowOf } from '../run-window';
 import type { Services } from '../services';
 
 export const channelViewOf = (channel: store.ChannelRecord): ChannelView => ({
@@ -193,10 +194,8 @@ export const dataRoutes = [
   mount(contracts.readSamples, async ({ params, membership, services, query }) => {
     const run = await loadRun(services, membership.labId, params.runId);
     const channels = await channelsOfRun(services.database.db, run);
-    const window = {
-      fromUtcMs: query.fromUtcMs ?? run.startedAt ?? run.createdAt,
-      toUtcMs: query.toUtcMs ?? run.endedAt ?? services.clock.utcMs(),
-    };
+    const whole = windowOf(run, services);
+    const window = { fromUtcMs: query.fromUtcMs ?? whole.fromUtcMs, toUtcMs: query.toUtcMs ?? whole.toUtcMs };
     if (window.toUtcMs < window.fromUtcMs)
       throw new ProblemError('invalid-input', 'The window ends before it begins.', [{ path: 'toUtcMs', message: 'not before fromUtcMs' }]);
     const { channel, total } = await chooseChannel(services, { run, channels, window }, query.channelId);

@@ -15,6 +15,7 @@ import { decodeCursor, pageFrom } from '../paging';
 import { notFound } from '../problem-error';
 import { mount } from '../route-context';
 import { startSubject } from '../reviews';
+import { startUtcMsOf } from '../run-window';
 import { loadRun as load, runSummaryOf, storedRunView } from '../run-view';
 
 const listRoutes = [
@@ -97,7 +98,7 @@ function attach(res: Response, run: store.RunRecord, ending: string): void {
       .replaceAll(/[^a-z0-9]+/g, '-')
       .replaceAll(/^-|-$/g, '')
       .slice(0, 40) || 'run';
-  const day = isoOf(run.startedAt ?? run.createdAt).slice(0, 10);
+  const day = isoOf(startUtcMsOf(run)).slice(0, 10);
   res.set('Content-Disposition', `attachment; filename="evenfall-${day}-${name}-${run.id.slice(0, 8)}${ending}"`);
 }
 

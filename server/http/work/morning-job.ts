@@ -7,6 +7,7 @@ import type { Handle } from '../../store/database';
 import { listEvaluations, queueEvaluation } from '../../store/evaluations';
 import { enqueueJob } from '../../store/jobs';
 import { findRun, type RunRecord } from '../../store/runs-read';
+import { outcomeOf } from '../archive-input';
 import { channelToEvaluate } from '../channel-to-evaluate';
 import { isoOrNull } from '../maker';
 import { morningOf } from '../morning';
@@ -61,7 +62,7 @@ async function channelOf(services: Services, run: RunRecord): Promise<string | n
   }
 }
 
-const states: Partial<Record<RunRecord['state'], string>> = { finished: 'Finished', stopped: 'Stopped', failed: 'Failed' };
+const outcomes = { finished: 'Finished', stopped: 'Stopped', failed: 'Failed', held: 'Held' };
 
 async function sendMorning(services: Services, run: RunRecord): Promise<void> {
   const { labId, id: runId, start } = run;
@@ -69,7 +70,7 @@ async function sendMorning(services: Services, run: RunRecord): Promise<void> {
   // Nothing was measured: that it ended was told already.
   if (sheet.dwells.done === 0) return;
   const ended = {
-    state: states[run.state] ?? 'Held',
+    state: outcomes[outcomeOf(run)],
     endedAt: isoOrNull(run.endedAt),
     reason: run.failure ?? '',
     timeZone: start.timeZone,

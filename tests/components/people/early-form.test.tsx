@@ -1,6 +1,5 @@
 import { act, render, screen } from '@testing-library/react';
 import { createElement, Suspense, use } from 'react';
-import { createRoot } from 'react-dom/client';
 import { CredentialsForm } from '@/components/people/credentials-form';
 import { ThemeProvider } from '@/components/theme';
 
@@ -22,11 +21,9 @@ afterEach(() => {
   document.body.innerHTML = '';
 });
 
-test('what was typed before the program came stands in its own form', async () => {
-  const root = createRoot(earlyPage('ada@thornfield.example'));
-  await act(async () => root.render(form));
+test('what was typed before the program came stands in its own form', () => {
+  render(form, { container: earlyPage('ada@thornfield.example') });
   expect(fieldSays('email')).toBe('ada@thornfield.example');
-  await act(async () => root.unmount());
 });
 
 test('it is not lost where React throws a form away that it had begun, as it does for what has to wait', async () => {
@@ -38,11 +35,10 @@ test('it is not lost where React throws a form away that it had begun, as it doe
     use(late);
     return null;
   }
-  const root = createRoot(earlyPage('ada@thornfield.example'));
-  await act(async () => root.render(createElement(Suspense, { fallback: null }, form, createElement(Late))));
+  const container = earlyPage('ada@thornfield.example');
+  await act(async () => render(createElement(Suspense, { fallback: null }, form, createElement(Late)), { container }));
   await act(async () => arrive());
   expect(fieldSays('email')).toBe('ada@thornfield.example');
-  await act(async () => root.unmount());
 });
 
 test('a form that the program draws later is empty', () => {

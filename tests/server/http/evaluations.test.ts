@@ -6,6 +6,7 @@ import type { StepRowView } from '@/shared/contracts/runs';
 import { compareResults } from '@/shared/evaluation/compare-results';
 import { morningSheetSchema } from '@/shared/contracts/morning';
 import { CODATA_2022_G } from '@/shared/physics/constants';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol } from '@/tests/support/lab-server';
 import { outsideWorld } from './outside-world';
@@ -118,7 +119,7 @@ test('a rehearsal of the short protocol is stored like a run, and its evaluation
   expect(recomputed).toMatchObject({ state: 'done', software: done.software });
   expect(done.software).toMatch(/^\d+\.\d+/);
   if (done.result === null || recomputed.result === null) throw new Error('both came to a result');
-  expect(compareResults(done.result, recomputed.result)).toEqual([]);
+  expect(compareResults(done.result, recomputed.result, demoRigWide)).toEqual([]);
   await lab.as('analyst', 'POST', `${labPath}/evaluations/${recomputed.id}/freeze`).send({ reason: 'this too' }).expect(409);
 
   // One asked for afterwards does without the dwell and says so; once it is frozen the archive tells what was excluded, and why.

@@ -1,5 +1,6 @@
 import { compareResults } from '@/shared/evaluation/compare-results';
 import type { EvaluationResult } from '@/shared/evaluation/result';
+import { demoRigWide } from '@/shared/rig/demo-rigs';
 
 const dwell = (seq: number, value: number) => ({
   seq,
@@ -30,7 +31,7 @@ const result: EvaluationResult = {
 };
 
 test('the same result, through JSON too, has no difference', () => {
-  expect(compareResults(result, JSON.parse(JSON.stringify(result)) as EvaluationResult)).toEqual([]);
+  expect(compareResults(result, JSON.parse(JSON.stringify(result)) as EvaluationResult, demoRigWide)).toEqual([]);
 });
 
 test('what differs is named with both values, each beside its u, and G comes first', () => {
@@ -40,7 +41,7 @@ test('what differs is named with both values, each beside its u, and G comes fir
     dwells: [dwell(2, 1e-4), dwell(4, 1.5e-3), { ...dwell(6, -1.5e-3), used: false, why: 'a door' }],
     G: { value: 6.675e-11, u: 2e-14, degreesOfFreedom: 9 },
   };
-  const differences = compareResults(result, other);
+  const differences = compareResults(result, other, demoRigWide);
   expect(differences[0]).toMatchObject({ path: 'G', before: { value: 6.674e-11, u: 2e-14 }, after: { value: 6.675e-11, u: 2e-14 } });
   expect(differences[0]?.change).toBeCloseTo(1e-14, 25);
   expect(differences[0]?.unit).toMatch(/^m³.kg⁻¹.s⁻²$/u);
@@ -51,4 +52,19 @@ test('what differs is named with both values, each beside its u, and G comes fir
   // One dwell more is told as that; the dwells behind it are not shifted against each other.
   expect(byPath.get('dwells[2].theta_rad')).toMatchObject({ unit: 'rad', before: null, after: { value: 1e-4, u: 2e-7 } });
   expect([...byPath.keys()].filter((path) => path.startsWith('dwells[4]'))).toEqual([]);
+});
+
+test('lines of the budget and coefficients of the surroundings have their units', () => {
+  const line = (value: number) => ({ input: 'sources.mass', value, u: 0.001, sensitivity: 4e-11 / value, contribution: 1e-14, share: 1 });
+  const pull = { reversal_rad: { value: 3e-3, u: 3e-7 }, G: null };
+  const regression = (value: number) => ({
+    ...{ channel: 'box', unit: 'Cel', dwells: 8, degreesOfFreedom: 6, without: pull, with: pull },
+    coefficient: { value, u: 1e-6, unit: 'rad/Cel' },
+  });
+  const [one, other] = [1.5, 1.501].map((value) => ({ ...result, budget: [line(value)], regressions: [regression(value * 1e-5)] }));
+  const differences = compareResults(one as EvaluationResult, other as EvaluationResult, demoRigWide);
+  const unitOf = new Map(differences.map(({ path, unit }) => [path, unit]));
+  expect(unitOf.get('budget[sources.mass]')).toBe('kg');
+  expect(unitOf.get('budget[sources.mass].sensitivity')).toMatch(/^m³.kg⁻¹.s⁻² per kg$/u);
+  expect(unitOf.get('regressions[box].coefficient')).toBe('rad/Cel');
 });

@@ -1,3 +1,4 @@
+import type { BuildArchiveInput } from '@/shared/archive/build-archive';
 import { Pendulum, type PendulumSetting } from '@/shared/physics/pendulum';
 import { steadyAt, steadyRotation } from '@/shared/physics/steady-rotation';
 import { oscillatorOf, type Oscillator } from '@/shared/physics/oscillator';
@@ -6,7 +7,7 @@ import type { RigDocument } from '@/shared/rig/document';
 import { relativeDifference } from '../../support/check-data';
 import { evaluateNight } from '../../support/evaluate-night';
 import { normalDeviates } from '../../support/lcg';
-import type { NightPlan } from '../../support/night';
+import { nightStartUtcMs, type NightPlan } from '../../support/night';
 import { wideRig, withRig } from '../../support/reference-rigs';
 
 /** Sources that turn at a constant rate. Noise-free records give back the G they were made with. */
@@ -113,6 +114,30 @@ describe('with noise', () => {
     expect(Math.abs(value - trueG)).toBeLessThan(4 * u);
     expect(u).toBeLessThan(2 * (noisy.G?.u ?? 0));
   });
+});
+
+/** The channel says nothing from one instant of the night to another, s. */
+const silent =
+  (fromS: number, toS: number) =>
+  (input: BuildArchiveInput): BuildArchiveInput => {
+    const channels = input.channels.map(({ utcMs, value, ...channel }) => {
+      const there = (_: number, i: number) => {
+        const tS = ((utcMs[i] as number) - nightStartUtcMs) / 1000;
+        return tS < fromS || tS > toS;
+      };
+      return { ...channel, utcMs: utcMs.filter(there), value: value.filter(there) };
+    });
+    return { ...input, channels };
+  };
+
+test('a channel that was silent for more than a turn costs those turns and nothing else', () => {
+  const { G, modulation } = evaluateNight(base, { method: 'modulation' }, silent(1900, 3300)).result;
+  expect(relativeDifference(G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
+  expect(modulation?.turns).toBe(3);
+});
+
+test('a record of more turns than are looked at one by one: G to 1e-7, its zero drifting', () => {
+  expect(error({ ...rotation(29, 450), reading: (angle, tS) => angle + 3e-8 * tS })).toBeLessThan(1e-7);
 });
 
 test('turning back is not evaluated: what it shows does not count', () => {

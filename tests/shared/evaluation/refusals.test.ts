@@ -31,8 +31,10 @@ describe('the channel', () => {
     );
     const protocol = { formatVersion: 1 as const, name: 'x', steps: [{ kind: 'home' as const }], evaluation: { channel: 'deflection' } };
     expect(evaluateRecords({ ...two, protocol }).result.registered).toBe(true);
+    const startUtcMs = records.run.startedAtUtcMs as number;
     const exclusions = [
-      { startUtcMs: records.run.startedAtUtcMs as number, endUtcMs: (records.run.startedAtUtcMs as number) + 8000, reason: '' },
+      { startUtcMs: startUtcMs + 3000, endUtcMs: startUtcMs + 8000, reason: 'door' },
+      { startUtcMs, endUtcMs: startUtcMs + 5000, reason: 'a truck, in part at the same time' },
     ];
     const other = evaluateRecords({ ...two, protocol, exclusions }, { channel: 'camera' }).result;
     expect(other.registered).toBe(false);
@@ -44,7 +46,7 @@ describe('the channel', () => {
         },
         {
           code: 'excluded-by-hand',
-          message: 'Beside the registered rules the samples of one stretch, 8 s together, were excluded by hand (exclusions.csv).',
+          message: 'Beside the registered rules the samples of 2 stretches, 8 s together, were excluded by hand (exclusions.csv).',
         },
       ]),
     );
