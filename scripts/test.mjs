@@ -23,7 +23,8 @@ async function machine() {
   return startCluster('test');
 }
 const [cluster] = await Promise.all([machine(), ensureNodeModules()]);
-const env = { ...process.env, EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres'), TZ: 'UTC' };
+/** Servers among the tests stand back too, for as long as it takes: that is no reason for them to give up. */
+const env = { ...process.env, EVENFALL_DATABASE_ADMIN_URL: cluster.url('postgres'), EVENFALL_WATCHDOG_S: '60', TZ: 'UTC' };
 /** The row with the browser is the longest and the only one in real time: the others stand back for it. */
 const standingBack = (command, args, options) => pass('nice', ['-n', '19', command, ...args], options);
 const jest = (more, report, run = pass) =>

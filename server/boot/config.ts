@@ -41,6 +41,7 @@ const environmentSchema = z.object({
   EVENFALL_TRUSTED_PROXIES: count(0, 10, 0),
   EVENFALL_DEMO: flag,
   EVENFALL_VIRTUAL_EXIT_DELAY_S: count(1, 600, 120),
+  EVENFALL_WATCHDOG_S: count(1, 60, 3),
   EVENFALL_STATE_DIR: z.string().min(1).default(join(tmpdir(), 'evenfall')),
   EVENFALL_WEB_DIR: z.string().default('dist'),
   EVENFALL_SMTP_URL: z
@@ -82,6 +83,7 @@ export function readConfig(environment: Record<string, string | undefined>): Ser
     trustedProxies: env.EVENFALL_TRUSTED_PROXIES,
     demo: env.EVENFALL_DEMO,
     virtualExitDelayS: env.EVENFALL_VIRTUAL_EXIT_DELAY_S,
+    watchdogS: env.EVENFALL_WATCHDOG_S,
     stateDir: resolve(env.EVENFALL_STATE_DIR),
     webDir: env.EVENFALL_WEB_DIR === 'none' ? null : resolve(env.EVENFALL_WEB_DIR),
     smtpUrl: env.EVENFALL_SMTP_URL ?? null,

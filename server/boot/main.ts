@@ -60,7 +60,7 @@ async function main(): Promise<void> {
   process.on('SIGTERM', end);
 
   // Where a debugger stands still, a loop does too.
-  if (config.mode === 'production') startWatchdog();
+  if (config.mode === 'production') startWatchdog({ slowMs: 1_000, longestMs: 1_000 * config.watchdogS });
 
   const address = config.roles.includes('web') ? await server.listen() : await server.listenToWatchers().then(() => null);
   process.stdout.write(`${JSON.stringify(greeting(config, address, mailbox))}\n`);

@@ -13,13 +13,12 @@ export interface WatchdogSetting {
 }
 
 const BEAT_MS = 100;
-const usual = { slowMs: 1_000, longestMs: 3_000 };
 
 /**
- * Watches the event loop from a thread of its own: a loop that lags by more than a second for three seconds cannot drive a rig. The process
+ * Watches the event loop from a thread of its own: one that lags for longer than that cannot drive a rig. The process
  * ends at once; its leases lapse, the controller holds, and another process takes the rigs over.
  */
-export function startWatchdog(limits: Omit<WatchdogSetting, 'shared'> = usual): { stop(): Promise<void> } {
+export function startWatchdog(limits: Omit<WatchdogSetting, 'shared'>): { stop(): Promise<void> } {
   const shared = new SharedArrayBuffer(2 * Float64Array.BYTES_PER_ELEMENT);
   const seats = new Float64Array(shared);
   let dueMs = performance.now() + BEAT_MS;

@@ -20,6 +20,8 @@ export interface ServerConfig {
   demo: boolean;
   /** Exit delay when a rig is armed that is part of this server, s; that of a real rig is always 2 min. */
   virtualExitDelayS: number;
+  /** A process whose event loop lags by more than a second for so long ends itself, s. */
+  watchdogS: number;
   /** Folder for what is not in the database: mails of the demo, journals. */
   stateDir: string;
   /** Folder of the built web application; null: none is served. */

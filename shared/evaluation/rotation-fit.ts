@@ -1,4 +1,4 @@
-import { boxAverage, medianInterval, type BoxAverages } from '../statistics/box-average';
+import { boxAverage, type BoxAverages } from '../statistics/box-average';
 import { leastSquares } from '../statistics/least-squares';
 import { toRad, type ChannelScale } from './channel-scale';
 import type { DwellSamples } from './dwell-samples';
@@ -14,13 +14,13 @@ const boxesPerCycle = 60;
 const mostPieces = 24;
 /** A piece of which less is there tells too little of its own drift and harmonics, and is left out. */
 const leastShare = 0.5;
+/** The time of a piece is looked at in so many parts of a turn: two to a cycle of the highest harmonic. */
+const partsPerTurn = 4 * fittedHarmonics;
 
 interface Piece {
   fromS: number;
   toS: number;
   turns: number;
-  /** Samples that it has where none is missing. */
-  whole: number;
 }
 
 /** One rotation's data, averaged, and the columns they are fitted with. */
@@ -75,11 +75,9 @@ export function recordOf(
   const lengthS = (window.toUtcMs - window.fromUtcMs) / 1000;
   const turnsEach = Math.ceil(rotation.turns / mostPieces);
   const pieceS = (turnsEach * lengthS) / rotation.turns;
-  const everyS = medianInterval(tS);
   const pieces = Array.from({ length: Math.ceil(rotation.turns / turnsEach) }, (_, i): Piece => {
     const [fromS, toS] = [i * pieceS, Math.min(lengthS, (i + 1) * pieceS)];
-    const turns = Math.min(turnsEach, rotation.turns - i * turnsEach);
-    return { fromS, toS, turns, whole: (toS - fromS) / everyS };
+    return { fromS, toS, turns: Math.min(turnsEach, rotation.turns - i * turnsEach) };
   });
   const dying = (t: number, f: (x: number) => number) => Math.exp(-free.gamma * t) * f(free.omega * t);
   return {
@@ -106,14 +104,19 @@ export interface FitChoice {
   trust: Float64Array | null;
 }
 
-/** Places of the pieces of which enough is there, so far as it is trusted. */
+/** Places of the pieces of which enough is there, by time and so far as it is trusted. */
 function piecesThere({ averages, pieces, pieceOf }: RotationRecord, trust: Float64Array | null): number[] {
-  const samples = new Float64Array(pieces.length);
-  averages.weight.forEach((weight, i) => {
-    const piece = pieceOf[i] as number;
-    samples[piece] = (samples[piece] as number) + weight * (trust?.[i] ?? 1);
+  const seen = pieces.map(({ turns }) => new Uint8Array(partsPerTurn * turns));
+  averages.t.forEach((t, i) => {
+    const { fromS, toS } = pieces[pieceOf[i] as number] as Piece;
+    const parts = seen[pieceOf[i] as number] as Uint8Array;
+    const part = Math.floor(((t - fromS) / (toS - fromS)) * parts.length);
+    if ((trust?.[i] ?? 1) >= leastShare) parts[Math.min(parts.length - 1, Math.max(0, part))] = 1;
   });
-  return [...pieces.keys()].filter((piece) => (samples[piece] as number) >= leastShare * (pieces[piece] as Piece).whole);
+  return [...pieces.keys()].filter((piece) => {
+    const parts = seen[piece] as Uint8Array;
+    return parts.filter(Boolean).length >= leastShare * parts.length;
+  });
 }
 
 /** Whole turns in the pieces that are there. */

@@ -38,7 +38,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
   publicUrl: null,
   trustedProxies: 0,
   demo: true,
-  virtualExitDelayS: 5,
+  ...{ virtualExitDelayS: 5, watchdogS: 3 },
   stateDir: tmpdir(),
   webDir: null,
   smtpUrl: null,

@@ -92,10 +92,17 @@ export class LabClient {
     return this.post(`${runs}/${runId}/${what}`, {});
   }
 
-  /** Resumes as a person does, who has seen the review of it. */
+  /** Resumes as a person does, who has seen the review of it and tries again where the server says that it is too early. */
   async resume(runId: string): Promise<void> {
-    const { token: reviewToken } = (await this.post(`${runs}/${runId}/resume-review`, {})).body as { token: string };
-    await this.post(`${runs}/${runId}/resume`, { reviewToken, tappedAt: new Date().toISOString() });
+    await this.patiently('to resume', async () => {
+      const { token: reviewToken } = (await this.post(`${runs}/${runId}/resume-review`, {})).body as { token: string };
+      return this.post(`${runs}/${runId}/resume`, { reviewToken, tappedAt: new Date().toISOString() });
+    });
+  }
+
+  /** Reads, as soon as the server has its database. */
+  read(path: string): Promise<Answer> {
+    return this.patiently(path, () => this.get(path));
   }
 
   until(runId: string, there: (view: RunView) => boolean): Promise<RunView> {

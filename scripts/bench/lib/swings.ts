@@ -30,7 +30,7 @@ export async function eventsOf(lab: LabClient, runId: string): Promise<ChainedEv
   const events: ChainedEvent[] = [];
   for (let cursor: string | null = ''; cursor !== null;) {
     const after: string = cursor === '' ? '' : `&cursor=${encodeURIComponent(cursor)}`;
-    const page = (await lab.get(`/labs/${demoIds.lab}/runs/${runId}/events?limit=500${after}`)).body as {
+    const page = (await lab.read(`/labs/${demoIds.lab}/runs/${runId}/events?limit=500${after}`)).body as {
       items: ChainedEvent[];
       next: string | null;
     };

@@ -81,7 +81,7 @@ export async function listen({ cookie, runId, told }: RealNight, server: ServerP
 export async function driverOf(servers: readonly ServerProcess[], { cookie }: RealNight): Promise<ServerProcess> {
   for (const began = performance.now(); performance.now() - began < driverPatienceMs; await pause(50)) {
     for (const server of servers) {
-      const { body } = await new LabClient(server.address, cookie).get(`/labs/${demoIds.lab}/rigs/${demoIds.rig}`);
+      const { body } = await new LabClient(server.address, cookie).read(`/labs/${demoIds.lab}/rigs/${demoIds.rig}`);
       if ((body as { live: { condition: string } }).live.condition === 'ready') return server;
     }
   }

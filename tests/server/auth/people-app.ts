@@ -107,6 +107,7 @@ const testConfig = (stateDir: string, changes: Partial<ServerConfig>): ServerCon
   trustedProxies: 0,
   demo: false,
   virtualExitDelayS: 120,
+  watchdogS: 3,
   stateDir,
   webDir: null,
   smtpUrl: null,

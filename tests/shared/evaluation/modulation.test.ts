@@ -116,24 +116,35 @@ describe('with noise', () => {
   });
 });
 
-/** The channel says nothing from one instant of the night to another, s. */
-const silent =
-  (fromS: number, toS: number) =>
+/** Only those samples of the channel are there, by instant of the night (s) and place. */
+const only =
+  (there: (tS: number, i: number) => boolean) =>
   (input: BuildArchiveInput): BuildArchiveInput => {
     const channels = input.channels.map(({ utcMs, value, ...channel }) => {
-      const there = (_: number, i: number) => {
-        const tS = ((utcMs[i] as number) - nightStartUtcMs) / 1000;
-        return tS < fromS || tS > toS;
-      };
-      return { ...channel, utcMs: utcMs.filter(there), value: value.filter(there) };
+      const kept = (_: number, i: number) => there(((utcMs[i] as number) - nightStartUtcMs) / 1000, i);
+      return { ...channel, utcMs: utcMs.filter(kept), value: value.filter(kept) };
     });
     return { ...input, channels };
   };
 
 test('a channel that was silent for more than a turn costs those turns and nothing else', () => {
-  const { G, modulation } = evaluateNight(base, { method: 'modulation' }, silent(1900, 3300)).result;
+  const { G, modulation } = evaluateNight(
+    base,
+    { method: 'modulation' },
+    only((tS) => tS < 1900 || tS > 3300),
+  ).result;
   expect(relativeDifference(G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
   expect(modulation?.turns).toBe(3);
+});
+
+test('turns in which the channel told half as much as before are there all the same', () => {
+  const { G, modulation } = evaluateNight(
+    base,
+    { method: 'modulation' },
+    only((tS, i) => tS < 3000 || i % 2 === 0),
+  ).result;
+  expect(relativeDifference(G?.value ?? NaN, trueG)).toBeLessThan(1e-4);
+  expect(modulation?.turns).toBe(5);
 });
 
 test('a record of more turns than are looked at one by one: G to 1e-7, its zero drifting', () => {
