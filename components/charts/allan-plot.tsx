@@ -8,7 +8,7 @@ import { formatUncertain } from '@/shared/lib/format-uncertain';
 import { Axes, mapInto } from './chart-frame';
 import { pathOf } from './curve';
 import { HiddenTable } from './hidden-table';
-import { logTicks } from './ticks';
+import { logTicks } from '@/shared/lib/ticks';
 import { useWidth } from './use-width';
 
 const left = 58;

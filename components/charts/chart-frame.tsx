@@ -2,7 +2,7 @@ import type { ReactNode } from 'react';
 import { G, Line, Text as SvgText } from 'react-native-svg';
 import type { ThemeColors } from '@/components/theme';
 import { formatFixed } from '@/shared/lib/format-number';
-import { niceTicks } from './ticks';
+import { niceTicks } from '@/shared/lib/ticks';
 
 const numberFont = 'Atkinson Hyperlegible Mono';
 const wordFont = 'Atkinson Hyperlegible Next';

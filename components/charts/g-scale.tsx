@@ -3,7 +3,7 @@ import Svg, { Circle, Line, Rect, Text as SvgText } from 'react-native-svg';
 import { useTheme } from '@/components/theme';
 import { formatFixed } from '@/shared/lib/format-number';
 import { spokenUncertain } from '@/shared/lib/format-uncertain';
-import { niceTicks } from './ticks';
+import { niceTicks } from '@/shared/lib/ticks';
 import { useWidth } from './use-width';
 
 export interface GScaleProps {

@@ -5,7 +5,7 @@ import { formatDeflectionUncertain } from '@/shared/lib/format-angle';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { Axes, mapInto, roomy } from './chart-frame';
 import { HiddenTable } from './hidden-table';
-import { reversalPoints } from './reversals';
+import { reversalPoints } from '@/shared/evaluation/reversal-points';
 import { useWidth } from './use-width';
 
 const left = 66;

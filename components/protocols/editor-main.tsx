@@ -5,8 +5,10 @@ import { formatStepPath, parseStepPath } from '@/shared/protocol/step-path';
 import { useEditor } from './editor-context';
 import { Figures } from './figures';
 import { FindingsList } from './findings-list';
+import { NightPanel } from './night-panel';
 import { SaveTrouble } from './save-state';
 import { StepList } from './step-list';
+import { useForecast } from './use-forecast';
 import type { DraftSync } from './use-draft-sync';
 import type { PlanningRig } from './use-planning-rig';
 
@@ -20,8 +22,9 @@ interface EditorMainProps {
 
 /** Strip, figures, steps, findings: from the whole to the single step. */
 export function EditorMain({ sync, startAt, planning, restored }: EditorMainProps) {
-  const { plan, timeZone } = useEditor();
+  const { plan, timeZone, rig } = useEditor();
   const wide = useWide();
+  const forecast = useForecast(plan, rig?.document ?? null);
   return (
     <>
       <MayNote act="protocol.write" />
@@ -38,10 +41,11 @@ export function EditorMain({ sync, startAt, planning, restored }: EditorMainProp
       ) : (
         <>
           <Strip />
-          <Figures plan={plan} timeZone={timeZone} startAt={startAt} />
+          <Figures plan={plan} forecast={forecast} timeZone={timeZone} startAt={startAt} />
         </>
       )}
       <StepList />
+      {plan === null || rig === null || forecast === null ? null : <NightPanel forecast={forecast} plan={plan} rig={rig.document} />}
       {wide ? null : <FindingsList />}
       <Label className="hidden wide:flex">
         Arrows choose a step, Alt and arrows move it, Enter opens its details, Delete deletes it, Ctrl+Z undoes.

@@ -2,8 +2,9 @@ import { View } from 'react-native';
 import { Label, Num } from '@/components/ui';
 import { deflectionParts } from '@/shared/lib/format-angle';
 import { formatDuration } from '@/shared/lib/format-duration';
-import { formatSignificant } from '@/shared/lib/format-number';
+import { formatPercent, formatSignificant } from '@/shared/lib/format-number';
 import { formatClock, zoneName } from '@/shared/lib/format-time';
+import type { NightForecast } from '@/shared/planning/night-forecast';
 import type { Plan } from './plan';
 
 const unsigned = (text: string) => text.replace(/^\+/, '');
@@ -15,8 +16,16 @@ function signalWords(plan: Plan): { value: string; unit: string; label: string }
   return { value: unsigned(number), unit, label: `near − far${mm}` };
 }
 
-/** Finish time, the largest; length and signal beside it. */
-export function Figures({ plan, timeZone, startAt }: { plan: Plan; timeZone: string; startAt: string }) {
+interface FiguresProps {
+  plan: Plan;
+  /** Null where the plan gives no G. */
+  forecast: NightForecast | null;
+  timeZone: string;
+  startAt: string;
+}
+
+/** Finish time, the largest; length, signal and u of G beside it. */
+export function Figures({ plan, forecast, timeZone, startAt }: FiguresProps) {
   const end = plan.timeline.endUtcMs;
   const signal = signalWords(plan);
   const weekday = formatClock(end, { timeZone, weekday: true }).split(' ')[1] ?? '';
@@ -54,6 +63,14 @@ export function Figures({ plan, timeZone, startAt }: { plan: Plan; timeZone: str
           </Num>
           <Label>{signal.label}</Label>
         </View>
+        {forecast === null ? null : (
+          <View>
+            <Num size={17} testID="figure-u">
+              {formatPercent(forecast.predicted.relativeU)}
+            </Num>
+            <Label>u(G) of G after the night</Label>
+          </View>
+        )}
       </View>
     </View>
   );

@@ -1,31 +1,17 @@
 import { readFileSync } from 'node:fs';
 import PDFDocument from 'pdfkit';
+import { drawPlot, plotRoomPt, type Plot } from './report-plot';
 
 /** A4 pages with headings, lines, tables and plain plots. Lengths in points. */
 
 const margin = 56;
-const plotPt = 130;
-/** Room that a plot takes, its words included. */
-export const wholePlotPt = plotPt + 40;
+const plotPt = 120;
+/** Room that a plot of the usual height takes, its words included. */
+export const wholePlotPt = plotRoomPt(plotPt);
 const fontFiles = {
   plain: require.resolve('dejavu-fonts-ttf/ttf/DejaVuSans.ttf'),
   strong: require.resolve('dejavu-fonts-ttf/ttf/DejaVuSans-Bold.ttf'),
 };
-
-export interface PlotPoint {
-  x: number;
-  y: number;
-  u: number;
-  far: boolean;
-}
-
-export interface Plot {
-  points: readonly PlotPoint[];
-  xWords: string;
-  yWords: string;
-  /** Words at a value of y. */
-  format: (y: number) => string;
-}
 
 export class ReportPage {
   private readonly document: PDFKit.PDFDocument;
@@ -53,7 +39,8 @@ export class ReportPage {
     return this.document.page.width - 2 * margin;
   }
 
-  private room(height: number): void {
+  /** What follows is so high and stays on one page. */
+  room(height: number): void {
     if (this.document.y + height > this.document.page.height - margin) this.document.addPage();
   }
 
@@ -102,38 +89,32 @@ export class ReportPage {
     this.document.x = margin;
   }
 
-  /** Points with ± u over x; near as discs, far as rings. */
-  plot({ points, xWords, yWords, format }: Plot): void {
-    if (points.length === 0) return;
-    this.room(wholePlotPt);
+  /** `heightPt` of the frame. */
+  plot(plot: Plot, heightPt = plotPt): void {
+    if (plot.points.length === 0) return;
+    this.room(plotRoomPt(heightPt));
     const { document } = this;
-    const [left, top] = [margin + 60, document.y + 14];
-    const width = this.width - 70;
-    const xs = points.map(({ x }) => x);
-    const low = Math.min(...points.map(({ y, u }) => y - u));
-    const high = Math.max(...points.map(({ y, u }) => y + u));
-    const [fromX, toX] = [Math.min(...xs), Math.max(...xs)];
-    const px = (x: number) => left + (toX === fromX ? 0.5 : (x - fromX) / (toX - fromX)) * width;
-    const py = (y: number) => top + plotPt - (high === low ? 0.5 : (y - low) / (high - low)) * plotPt;
-    document
-      .lineWidth(0.5)
-      .strokeColor('#555555')
-      .rect(left - 8, top - 4, width + 16, plotPt + 8)
-      .stroke();
-    for (const { x, y, u, far } of points) {
-      document
-        .strokeColor('#000000')
-        .moveTo(px(x), py(y - u))
-        .lineTo(px(x), py(y + u))
-        .stroke();
-      document.circle(px(x), py(y), 2.2);
-      if (far) document.fillAndStroke('#ffffff', '#000000');
-      else document.fillAndStroke('#000000', '#000000');
+    const top = document.y;
+    drawPlot(document, { x: margin, y: top, width: this.width, heightPt }, plot);
+    document.x = margin;
+    document.y = top + plotRoomPt(heightPt);
+  }
+
+  /** Shares from 0 to 1 as bars, each with its words before it and its figure behind. */
+  bars(rows: readonly { words: string; share: number; figure: string }[]): void {
+    const { document } = this;
+    const [words, figure] = [0.34 * this.width, 0.12 * this.width];
+    const most = this.width - words - figure - 12;
+    for (const row of rows) {
+      this.room(14);
+      const top = document.y;
+      document.fillColor('#000000').font('plain').fontSize(8);
+      document.text(row.words, margin, top, { width: words, lineBreak: false });
+      document.text(row.figure, margin + this.width - figure, top, { width: figure, align: 'right', lineBreak: false });
+      document.rect(margin + words + 6, top + 1, Math.max(0.5, row.share * most), 7).fill('#444444');
+      document.y = top + 13;
     }
-    document.fillColor('#000000').font('plain').fontSize(8);
-    for (const y of [low, (low + high) / 2, high]) document.text(format(y), margin, py(y) - 4, { width: 48, align: 'right' });
-    document.text(yWords, margin, top - 16, { width: this.width });
-    document.text(xWords, left, top + plotPt + 8, { width, align: 'right' });
+    document.fillColor('#000000');
     document.x = margin;
     document.moveDown(0.5);
   }

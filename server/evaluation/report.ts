@@ -5,6 +5,7 @@ import { formatFixed, formatPercent, formatSignificant, UNIT_OF_G } from '@/shar
 import { formatUncertain, uncertainParts } from '@/shared/lib/format-uncertain';
 import type { ReportInput } from '../interfaces/report';
 import { ReportPage, wholePlotPt } from './report-page';
+import { plotAllan, plotCentres, plotFits, plotReversals } from './report-plots';
 
 const ofG = (value: number, u: number | null) => formatUncertain({ value, u, unit: UNIT_OF_G });
 const utc = (ms: number | null) =>
@@ -27,7 +28,9 @@ export function measurementReport(input: ReportInput, { compress = true } = {}):
   quantities(page, result);
   methodsPart(page, result);
   budgetPart(page, input);
+  reversalsPart(page, result);
   dwellsPart(page, result);
+  plotFits(page, input.curves);
   residualsPart(page, input);
   remarks(page, result);
   logPart(page, input);
@@ -104,38 +107,27 @@ function methodsPart(page: ReportPage, { methods }: EvaluationResult): void {
 
 function budgetPart(page: ReportPage, { result: { budget }, rig }: ReportInput): void {
   if (budget === null) return;
-  page.heading('Budget of uncertainty');
-  const rows = [...budget]
-    .sort((a, b) => b.share - a.share)
-    .map(({ input, value, u, contribution, share }) => [
-      inputWords(input),
-      formatUncertain({ value, u, unit: unitOfInput(input, rig) }),
-      formatUncertain({ value: contribution, u: null, unit: UNIT_OF_G }),
-      formatPercent(share),
-    ]);
+  page.heading('Budget of uncertainty', 100);
+  const lines = [...budget].sort((a, b) => b.share - a.share);
+  page.bars(lines.slice(0, longestBars).map(({ input, share }) => ({ words: inputWords(input), share, figure: formatPercent(share) })));
+  const rows = lines.map(({ input, value, u, contribution, share }) => [
+    inputWords(input),
+    formatUncertain({ value, u, unit: unitOfInput(input, rig) }),
+    formatUncertain({ value: contribution, u: null, unit: UNIT_OF_G }),
+    formatPercent(share),
+  ]);
   page.table([['Input', 'Value and u', 'Contribution to u(G)', 'Share'], ...rows], [0.3, 0.28, 0.3, 0.12]);
+}
+
+function reversalsPart(page: ReportPage, result: EvaluationResult): void {
+  if (result.reversal_rad === null) return;
+  page.heading('Reversals over the night', wholePlotPt);
+  plotReversals(page, result);
 }
 
 function dwellsPart(page: ReportPage, { dwells }: EvaluationResult): void {
   page.heading('Dwells', wholePlotPt);
-  const meanOf = (station: string) => {
-    const own = dwells.flatMap((dwell) =>
-      dwell.used && dwell.station === station && dwell.theta_rad !== null ? [dwell.theta_rad.value] : [],
-    );
-    return own.reduce((sum, value) => sum + value, 0) / Math.max(1, own.length);
-  };
-  const means = { near: meanOf('near'), far: meanOf('far') };
-  const points = dwells.flatMap(({ seq, station, used, theta_rad: theta }) =>
-    used && theta !== null && (station === 'near' || station === 'far')
-      ? [{ x: seq, y: (theta.value - means[station]) * micro, u: theta.u * micro, far: station === 'far' }]
-      : [],
-  );
-  page.plot({
-    points,
-    yWords: 'Centre less the mean of its station, µrad, with ± u: near disc, far ring',
-    xWords: 'row of the step log',
-    format: (y) => formatSignificant(y, 2),
-  });
+  plotCentres(page, { dwells });
   const rows = dwells.map(({ seq, station, theta_rad: theta, samples, used, why }) => [
     String(seq),
     station,
@@ -149,7 +141,8 @@ function dwellsPart(page: ReportPage, { dwells }: EvaluationResult): void {
 function residualsPart(page: ReportPage, { curves }: ReportInput): void {
   const points = residualAllan(curves);
   if (points.length === 0) return;
-  page.heading('Allan deviation of the residuals');
+  page.heading('Allan deviation of the residuals', wholePlotPt);
+  plotAllan(page, points);
   const rows = points.map(({ tauS, deviationRad, u }) => [
     `${formatSignificant(tauS, 3)} s`,
     formatUncertain({ value: deviationRad * micro, u: u * micro, unit: 'µrad' }),
@@ -179,5 +172,8 @@ function logPart(page: ReportPage, { steps }: ReportInput): void {
   page.table([['Row', 'Step', 'Station', 'Start and u', 'Turntable', 'Outcome'], ...rows], [0.08, 0.12, 0.12, 0.38, 0.18, 0.12]);
   if (steps.length > longestLog) page.line(`${steps.length - longestLog} more rows are in the archive of the run.`);
 }
+
+/** Bars of the budget; the table has all its lines. */
+const longestBars = 6;
 
 const longestLog = 60;

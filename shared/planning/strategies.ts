@@ -1,11 +1,12 @@
 import { oscillatorOf } from '../physics/oscillator';
 import { swingMove, UnplayableStep } from '../protocol/durations';
+import { predictSignal } from '../protocol/predict';
 import { sideAt } from '../protocol/stations';
 import type { Timeline } from '../protocol/timeline';
 import type { RigDocument } from '../rig/document';
 import { calibrationsOf } from './calibration';
-import type { Cadence } from './night-noise';
-import { predictU } from './plan-uncertainty';
+import { differenceU, type Cadence } from './night-noise';
+import { predictU, type PredictedU } from './plan-uncertainty';
 
 /** The cadence of a plan, and what other ways of spending the same time would give. */
 
@@ -36,6 +37,13 @@ export interface Alternative {
   relativeU: number;
 }
 
+/** The best of a strategy with the cadence that makes it. */
+export interface StrategyNight {
+  strategy: Alternative['strategy'];
+  cadence: Cadence;
+  predicted: PredictedU;
+}
+
 /** Ringing that has died to this fraction counts as settled. */
 const settledShare = 0.01;
 const mostPeriods = 8;
@@ -51,17 +59,29 @@ function swingS(rig: RigDocument): number | null {
   }
 }
 
+/** The best of each strategy in the same time, as `plan` prints it. */
+export function alternatives(rig: RigDocument, night: { durationS: number; calibrations: Cadence['calibrations'] }): Alternative[] {
+  return strategyNights(rig, night).map(({ strategy, cadence: { dwells, dwellS, cycleS }, predicted: { relativeU } }) => ({
+    strategy,
+    dwell_s: dwellS,
+    duration_s: dwells * cycleS,
+    relativeU,
+  }));
+}
+
 /**
  * The best of each strategy in the same time: fitting through the ringing at a beat of whole periods, swings in two moves, and waiting
- * until the ringing has died to a hundredth. Empty where the rig does not tell.
+ * until the ringing has died to a hundredth. Empty where the rig does not tell. Only the dwells' noise hangs on the cadence, so the rest of
+ * the budget is worked out for the best alone.
  */
-export function alternatives(
+export function strategyNights(
   rig: RigDocument,
   { durationS, calibrations }: { durationS: number; calibrations: Cadence['calibrations'] },
-): Alternative[] {
+): StrategyNight[] {
   const oscillator = oscillatorOf(rig);
   const moveS = swingS(rig);
-  if (oscillator === null || moveS === null || !(durationS > 0)) return [];
+  const signalRad = predictSignal(rig)?.signalRad;
+  if (oscillator === null || moveS === null || signalRad === undefined || !(signalRad > 0) || !(durationS > 0)) return [];
   const { periodS, gamma } = oscillator;
   const dead: Record<Alternative['strategy'], number> = {
     plain: moveS,
@@ -76,20 +96,13 @@ export function alternatives(
         const dwellS =
           strategy === 'wait' ? periods * periodS : Math.ceil((dead[strategy] + 1) / periodS + periods - 1) * periodS - dead[strategy];
         const cycleS = dwellS + dead[strategy];
-        const dwells = Math.floor(durationS / cycleS);
-        const found = predictU(rig, {
-          dwells,
-          dwellS,
-          cycleS,
-          calibrations,
-          rings: strategy === 'plain',
-        });
-        return found === null
-          ? []
-          : [{ strategy, dwell_s: dwellS, duration_s: dwells * cycleS, relativeU: found.relativeU, statistics: found.statistics }];
+        const cadence: Cadence = { dwells: Math.floor(durationS / cycleS), dwellS, cycleS, calibrations, rings: strategy === 'plain' };
+        const u = differenceU(rig, cadence, signalRad);
+        return u === null ? [] : [{ cadence, u }];
       });
     if (candidates.length === 0) return [];
-    const { statistics, ...best } = candidates.reduce((a, b) => (b.statistics < a.statistics ? b : a));
-    return statistics > 0 || best.relativeU > 0 ? [best] : [];
+    const { cadence } = candidates.reduce((a, b) => (b.u < a.u ? b : a));
+    const predicted = predictU(rig, cadence);
+    return predicted !== null && (predicted.statistics > 0 || predicted.relativeU > 0) ? [{ strategy, cadence, predicted }] : [];
   });
 }

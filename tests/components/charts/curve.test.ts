@@ -1,7 +1,7 @@
 import * as fc from 'fast-check';
 import { extent, gapOf, lowerBound, valueAt } from '@/components/charts/curve';
 import { panned, zoomed } from '@/components/charts/deflection-plot-types';
-import { niceTicks } from '@/components/charts/ticks';
+import { niceTicks } from '@/shared/lib/ticks';
 
 test('the first index at or after a value is found', () => {
   fc.assert(

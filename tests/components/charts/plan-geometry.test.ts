@@ -1,5 +1,5 @@
 import { planLayout, polar, stationNear } from '@/components/charts/plan-geometry';
-import { reversalPoints } from '@/components/charts/reversals';
+import { reversalPoints } from '@/shared/evaluation/reversal-points';
 import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
 
 test('angles grow counter-clockwise from the arm at rest, which lies to the right', () => {

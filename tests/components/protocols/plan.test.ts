@@ -1,7 +1,10 @@
+import { dwellWords, sourceLines, strategyLines } from '@/components/protocols/night-words';
 import { makeMiniature, makePlan } from '@/components/protocols/plan';
 import { differenceWords } from '@/components/protocols/difference-words';
 import { stepTitle, stepUnder } from '@/components/protocols/step-words';
 import { compareDocuments } from '@/shared/protocol/compare';
+import { forecastNight, type NightForecast } from '@/shared/planning/night-forecast';
+import { cadenceOf } from '@/shared/planning/strategies';
 import type { ProtocolDocument, Step } from '@/shared/protocol/document';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 
@@ -48,6 +51,22 @@ test('a draft that cannot run is shown with its findings instead of failing', ()
   };
   const plan = makePlan({ document: broken, ...at });
   expect(plan.findings.map(({ path }) => path)).toEqual(expect.arrayContaining(['1.swing', '2.repeat']));
+});
+
+test('what the night gives: u of G by source with the greatest first, what the dwells leave open, and the same hours otherwise', () => {
+  const { timeline } = makePlan({ document, ...at });
+  const cadence = cadenceOf(timeline, demoRigWide) as NightForecast['cadence'];
+  const forecast = forecastNight(demoRigWide, cadence, timeline.durationS) as NightForecast;
+  const [first, second] = sourceLines(forecast, 2);
+  // The orbit of the sources leaves 0.38 % of G open on the wide rig, the arm 0.11 % (physics.md F4).
+  expect(first).toMatchObject({ name: 'orbit of the sources', u: '0.38\u202f%' });
+  expect(second).toMatchObject({ name: 'arm of the pendulum', u: '0.11\u202f%' });
+  expect(dwellWords(forecast)).toMatch(
+    /^The dwells leave 0\.\d+\u202f% of G open, of it .* for the wandering of the zero\. From \d+ pairs? on/,
+  );
+  const lines = strategyLines(forecast);
+  expect(lines.filter(({ best }) => best)).toHaveLength(1);
+  expect(lines.at(-1)?.under).toMatch(/1 pair|2 pairs|3 pairs/);
 });
 
 test('a miniature is drawn from the same plan with fewer points', () => {

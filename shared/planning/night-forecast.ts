@@ -1,0 +1,57 @@
+import type { RigDocument } from '../rig/document';
+import type { Cadence } from './night-noise';
+import { predictU, type PredictedU } from './plan-uncertainty';
+import { strategyNights, type StrategyNight } from './strategies';
+
+/** What a planned night is expected to give, and what else could be done with its hours. */
+export interface NightForecast {
+  cadence: Cadence;
+  predicted: PredictedU;
+  /** Relative u of G that the wandering of the zero makes, in `predicted.statistics`. */
+  wandering: number;
+  /** Pairs from which on more of them lower u(G) by less than a twentieth; null where even many do not come so far. */
+  enoughPairs: number | null;
+  /** Best of each strategy in the hours of the plan. */
+  strategies: StrategyNight[];
+}
+
+/** The dwells count no more where they make less than this share of what all else leaves open: u(G) is then within 5 % of its least. */
+const littleShare = 0.32;
+const mostPairs = 1024;
+
+/** Of a night of so many seconds at a cadence; null where the rig does not tell enough. */
+export function forecastNight(rig: RigDocument, cadence: Cadence, durationS: number): NightForecast | null {
+  const predicted = predictU(rig, cadence);
+  if (predicted === null) return null;
+  const still = predictU({ ...rig, noise: { ...rig.noise, walk_rad_per_sqrt_min: 0 } }, cadence);
+  return {
+    cadence,
+    predicted,
+    wandering: Math.sqrt(Math.max(0, predicted.statistics ** 2 - (still?.statistics ?? 0) ** 2)),
+    enoughPairs: fewestPairs(rig, cadence, ({ statistics, relativeU }) => statistics <= littleShare * restOf({ statistics, relativeU })),
+    strategies: strategyNights(rig, { durationS, calibrations: cadence.calibrations }),
+  };
+}
+
+const restOf = ({ relativeU, statistics }: Pick<PredictedU, 'relativeU' | 'statistics'>) =>
+  Math.sqrt(Math.max(0, relativeU ** 2 - statistics ** 2));
+
+/** Fewest pairs at the cadence's beat that bring the relative u of G down to `wanted`; null where no number of them does. */
+export const pairsToReach = (rig: RigDocument, cadence: Cadence, wanted: number): number | null =>
+  fewestPairs(rig, cadence, ({ relativeU }) => relativeU <= wanted);
+
+function fewestPairs(rig: RigDocument, cadence: Cadence, isEnough: (predicted: PredictedU) => boolean): number | null {
+  const does = (pairs: number) => {
+    const predicted = predictU(rig, { ...cadence, dwells: 2 * pairs });
+    return predicted !== null && isEnough(predicted);
+  };
+  if (!does(mostPairs)) return null;
+  let [few, many] = [0, 1];
+  while (!does(many)) [few, many] = [many, 2 * many];
+  while (many - few > 1) {
+    const middle = Math.floor((few + many) / 2);
+    if (does(middle)) many = middle;
+    else few = middle;
+  }
+  return many;
+}
