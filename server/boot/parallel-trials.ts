@@ -30,7 +30,7 @@ export function createTrialCrew(trials: number): TrialCrew {
       });
       values.set(drawTrials(model, { trials, fromBlock: 0, toBlock: Math.min(blocks, share) }), 0);
       await Promise.all(helped);
-      return summarised(values);
+      return summarised(values, model.inputs);
     },
     async close() {
       await Promise.all(workers.map((worker) => worker.terminate()));

@@ -64,15 +64,18 @@ function resultPart(page: ReportPage, { result }: ReportInput): void {
   );
   page.line(`CODATA 2022: ${ofG(codata.value, codata.u)}${codata.En === null ? '' : `; En = ${formatSignificant(codata.En, 2)}`}.`);
   if (monteCarlo !== null) {
-    const [low, high] = monteCarlo.interval95;
+    const { trials, G_mean: mean, G_u: u, interval95 } = monteCarlo;
     // As many digits as u has; the interval is itself the uncertainty.
     const end = (at: number) => {
-      const { value, factor, unit } = uncertainParts({ value: at, u: monteCarlo.G_u, unit: UNIT_OF_G });
+      const { value, factor, unit } = uncertainParts({ value: at, u: u ?? G.u ?? 0, unit: UNIT_OF_G });
       return value + factor + unit;
     };
-    page.line(
-      `Monte Carlo (JCGM 101, ${formatFixed(monteCarlo.trials, { decimals: 0 })} trials): ${ofG(monteCarlo.G_mean, monteCarlo.G_u)}; 95 % interval from ${end(low)} to ${end(high)}.`,
-    );
+    const found = [
+      ...(mean === null ? [] : [ofG(mean, u)]),
+      ...(u === null ? ['no standard deviation, for an input has two degrees of freedom at most'] : []),
+      ...(interval95 === null ? [] : [`95 % interval from ${end(interval95[0])} to ${end(interval95[1])}`]),
+    ];
+    page.line(`Monte Carlo (JCGM 101, ${formatFixed(trials, { decimals: 0 })} trials): ${found.join('; ')}.`);
   }
   page.line(`Method: ${result.method}${result.registered === null ? '' : result.registered ? ', as registered' : ', not as registered'}.`);
 }

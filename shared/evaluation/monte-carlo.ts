@@ -24,9 +24,12 @@ export interface TrialModel {
 
 export interface MonteCarloResult {
   trials: number;
-  G_mean: number;
-  G_u: number;
-  interval95: [number, number];
+  /** Null where an input has one degree of freedom or less: then there is no mean to tend to. */
+  G_mean: number | null;
+  /** Null where an input has two degrees of freedom or less, whose distribution has no standard deviation, or from one trial. */
+  G_u: number | null;
+  /** Null from fewer trials than tell its ends. */
+  interval95: [number, number] | null;
 }
 
 const seed = 20220;
@@ -53,20 +56,29 @@ export interface TrialSpan {
 
 export const blocksOf = (trials: number) => Math.ceil(trials / trialsPerBlock);
 
-/** Mean, standard deviation and probabilistically symmetric 95 % interval. Sorts the values in place. */
-export function summarised(values: Float64Array): MonteCarloResult {
+/** Fewest trials with one beyond each end of the 95 % interval. */
+const fewestForInterval = 40;
+
+/** Mean, standard deviation and probabilistically symmetric 95 % interval, so far as the inputs have them. Sorts the values in place. */
+export function summarised(values: Float64Array, inputs: readonly Pick<TrialInput, 'law' | 'u'>[]): MonteCarloResult {
   const trials = values.length;
   const first = values[0] as number;
   const mean = first + values.reduce((sum, value) => sum + (value - first), 0) / trials;
   const squares = values.reduce((sum, value) => sum + (value - mean) ** 2, 0);
   values.sort();
   const at = (share: number) => values[Math.min(trials - 1, Math.max(0, Math.round(share * trials - 0.5)))] as number;
-  return { trials, G_mean: mean, G_u: Math.sqrt(squares / Math.max(1, trials - 1)), interval95: [at(0.025), at(0.975)] };
+  const leastNu = Math.min(...inputs.map(({ law, u }) => (law.kind === 't' && u > 0 ? law.nu : Infinity)));
+  return {
+    trials,
+    G_mean: leastNu > 1 ? mean : null,
+    G_u: leastNu > 2 && trials > 1 ? Math.sqrt(squares / (trials - 1)) : null,
+    interval95: trials < fewestForInterval ? null : [at(0.025), at(0.975)],
+  };
 }
 
 /** All trials in this thread; null for none. */
 export function monteCarlo(model: TrialModel, trials: number): MonteCarloResult | null {
-  return trials === 0 ? null : summarised(drawTrials(model, { trials, fromBlock: 0, toBlock: blocksOf(trials) }));
+  return trials === 0 ? null : summarised(drawTrials(model, { trials, fromBlock: 0, toBlock: blocksOf(trials) }), model.inputs);
 }
 
 interface Part {

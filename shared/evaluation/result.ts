@@ -97,7 +97,12 @@ export const evaluationResultSchema = z.strictObject({
   codata: z.strictObject({ value: z.number(), u: z.number(), En: z.number().nullable() }),
   budget: z.array(budgetLineSchema).nullable(),
   monteCarlo: z
-    .strictObject({ trials: z.number().int(), G_mean: z.number(), G_u: z.number(), interval95: z.tuple([z.number(), z.number()]) })
+    .strictObject({
+      trials: z.number().int(),
+      G_mean: z.number().nullable(),
+      G_u: z.number().nullable(),
+      interval95: z.tuple([z.number(), z.number()]).nullable(),
+    })
     .nullable(),
   /** Of the modulation method alone: whole turns that were looked at, and half the swing at twice the turntable's angle. */
   modulation: z

@@ -7,7 +7,9 @@ import {
   type SidedValue,
 } from '../statistics/drift';
 import { walkDifference } from '../statistics/gls-drift';
+import { walkScatter } from '../statistics/wandering-zero';
 import { bilinear } from '../statistics/symmetric';
+import { lengthS } from './dwell-windows';
 import type { Segment } from './segment';
 import type { Known } from './free-oscillator';
 import { centreOf, type DwellFit } from './ring-down-fit';
@@ -27,7 +29,8 @@ export interface Reversal {
 /**
  * The difference by ABA windows or by a polynomial drift. Its uncertainty is the scatter between dwells together with what an
  * error of the shared ω and γ does to all of them alike: near and far ring in opposite senses, so that part follows the signal
- * and no scatter shows it. Null without two adjacent dwells on opposite sides.
+ * and no scatter shows it. The scatter of many dwells tells how much of it is a zero that walks, which ABA windows take out better than
+ * noise. Null without two adjacent dwells on opposite sides.
  */
 export function reversalOf(
   segments: readonly Segment[],
@@ -41,6 +44,7 @@ export function reversalOf(
     timeS: middleS(segments[i] as Segment),
     side: (segments[i] as Segment).window.side as 1 | -1,
     value: centres[k]?.value as number,
+    lengthS: lengthS((segments[i] as Segment).window),
   }));
   const count = countReversals(series);
   if (count === 0) return null;
@@ -62,7 +66,9 @@ export function reversalOf(
 
 function differenceOf(series: readonly SidedValue[], drift: { kind: string; order: number }, alternates: boolean): DifferenceEstimate {
   if (drift.kind === 'gls') return walkDifference(series);
-  return drift.kind === 'aba' && alternates && series.length >= 3 ? abaDifference(series) : polynomialDifference(series, drift.order);
+  if (drift.kind !== 'aba' || !alternates || series.length < 3) return polynomialDifference(series, drift.order);
+  const windows = abaDifference(series);
+  return { ...windows, ...walkScatter(series, windows.weights) };
 }
 
 /** Whether a fitted window counts in the reversal series. */

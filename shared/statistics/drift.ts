@@ -8,6 +8,8 @@ export interface SidedValue {
   /** +1 near, −1 far. */
   side: 1 | -1;
   value: number;
+  /** Time that the value is a mean over, s; 0 where nobody says. */
+  lengthS?: number;
 }
 
 export interface DifferenceEstimate {

@@ -6,9 +6,11 @@ import { relativeDifference } from '../../support/check-data';
 
 /** Worked examples of JCGM 101:2008, 9 (expected values exact where a formula is given), and the test of equivalence of physics.md L1. */
 
+/** Null is given where a distribution has no such moment: not here. */
 function propagated(seed: number, model: (draw: (law: Law) => number) => number) {
   const [source] = seededStreams(seed, 1) as [GaussianSource];
-  return summarised(Float64Array.from({ length: 200_000 }, () => model((law) => drawn(law, source))));
+  const { G_mean, G_u, interval95 } = summarised(Float64Array.from({ length: 200_000 }, () => model((law) => drawn(law, source))), []);
+  return { G_mean: G_mean ?? NaN, G_u: G_u ?? NaN, interval95: interval95 ?? [NaN, NaN] };
 }
 
 const normal: Law = { kind: 'normal' };
@@ -54,4 +56,16 @@ test('a null that is shown and one that is merely not significant', () => {
   const notShown = equivalence(data, 0.06);
   expect(relativeDifference(notShown.p, 0.1198469289756)).toBeLessThan(1e-9);
   expect(notShown.equivalent).toBe(false);
+});
+
+test('an input of so few degrees of freedom that its distribution has no standard deviation, or no mean, gives none', () => {
+  const { G_mean, G_u, interval95 } = summarised(Float64Array.from({ length: 100 }, (_, k) => k), [{ law: { kind: 't', nu: 2 }, u: 1 }]);
+  expect([G_mean, G_u, interval95]).toEqual([49.5, null, [2, 97]]);
+  expect(summarised(Float64Array.of(3, 4), [{ law: { kind: 't', nu: 1 }, u: 1 }])).toMatchObject({ G_mean: null, G_u: null });
+  // Its u counts only where there is one.
+  expect(summarised(Float64Array.of(3, 5), [{ law: { kind: 't', nu: 1 }, u: 0 }])).toMatchObject({ G_mean: 4, G_u: Math.SQRT2 });
+});
+
+test('one trial scatters not at all, and a few tell no interval', () => {
+  expect(summarised(Float64Array.of(3), [])).toEqual({ trials: 1, G_mean: 3, G_u: null, interval95: null });
 });
