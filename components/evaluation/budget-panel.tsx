@@ -3,19 +3,22 @@ import { View } from 'react-native';
 import { BudgetBars } from '@/components/charts';
 import { Body, Button, Label, Num, Section } from '@/components/ui';
 import { inputWords, unitOfInput } from '@/shared/evaluation/input-words';
-import type { BudgetLine } from '@/shared/evaluation/result';
-import { formatPercent } from '@/shared/lib/format-number';
+import { monteCarloWords } from '@/shared/evaluation/monte-carlo-words';
+import type { BudgetLine, EvaluationResult } from '@/shared/evaluation/result';
+import { formatPercent, UNIT_OF_G, unitSign } from '@/shared/lib/format-number';
 import { formatUncertain, uncertainParts } from '@/shared/lib/format-uncertain';
 import type { RigDocument } from '@/shared/rig/document';
 
 interface BudgetPanelProps {
-  lines: readonly BudgetLine[] | null;
+  result: EvaluationResult;
   rig: RigDocument | null;
 }
 
-/** Where the uncertainty comes from: bars by share, and on demand the table with sensitivities. */
-export function BudgetPanel({ lines, rig }: BudgetPanelProps) {
+/** Where the uncertainty comes from: bars by share, on demand the table with sensitivities, and what drawn inputs give. */
+export function BudgetPanel({ result, rig }: BudgetPanelProps) {
   const [table, setTable] = useState(false);
+  const lines = result.budget;
+  const trials = monteCarloWords(result);
   if (lines === null || lines.length === 0) return null;
   return (
     <Section title="Budget of uncertainty" remark="Share of each input in the square of u(G).">
@@ -28,6 +31,7 @@ export function BudgetPanel({ lines, rig }: BudgetPanelProps) {
         testID="budget-table-toggle"
       />
       {table ? <BudgetTable lines={lines} rig={rig} /> : null}
+      {trials === null ? null : <Body testID="monte-carlo">{trials}</Body>}
     </Section>
   );
 }
@@ -82,9 +86,14 @@ function BudgetRow({ line, unit }: { line: BudgetLine; unit: string }) {
       </td>
       <td className={right}>
         <Num className="whitespace-nowrap">{scientific(line.sensitivity)}</Num>
+        <Label>
+          {UNIT_OF_G}
+          {unit === '' ? '' : ` per ${unitSign(unit)}`}
+        </Label>
       </td>
       <td className={right}>
         <Num className="whitespace-nowrap">{scientific(line.contribution)}</Num>
+        <Label>{UNIT_OF_G}</Label>
       </td>
       <td className={right}>
         <Num className="whitespace-nowrap">{formatPercent(line.share)}</Num>

@@ -120,7 +120,7 @@ function Evaluated({ view, evaluation, result, panel, back, choice, freeze }: Ev
       </Section>
       {wide ? null : fit}
       {wide ? null : dwells}
-      <BudgetPanel lines={result.budget} rig={view.rig} />
+      <BudgetPanel result={result} rig={view.rig} />
       <TryPanel result={result} rig={view.rig} basis={evaluation.basis} />
       <MethodsPanel result={result} />
       <AllanPanel curves={curves} />

@@ -1,5 +1,6 @@
 import { View } from 'react-native';
 import { Body, Icon, Label, Section } from '@/components/ui';
+import { sameSamplesWords } from '@/shared/evaluation/method-words';
 import type { EvaluationResult, MethodResult } from '@/shared/evaluation/result';
 import { formatPercent, UNIT_OF_G } from '@/shared/lib/format-number';
 import { agreementOf, enWords, methodWords } from './evaluation-words';
@@ -12,7 +13,7 @@ export function MethodsPanel({ result }: { result: EvaluationResult }) {
   return (
     <Section
       title="Methods beside each other"
-      remark="From the same dwells. The u of a difference leaves out what the methods share: an error of a length or a mass moves them alike."
+      remark={`From the same dwells. The u of a difference leaves out what the methods share of the rig: an error of a length or a mass moves them alike. ${sameSamplesWords}`}
     >
       <View role="list" testID="methods">
         {methods.map((one, index) => (

@@ -38,7 +38,8 @@ function requested(args: readonly string[]): Request {
   if (values.trials !== undefined && !/^\d{1,8}$/.test(values.trials))
     throw new UnusableArguments(`--trials ${values.trials}: a whole number from 0 to 99 999 999 is needed`);
   const boundRad = values.bound === undefined ? undefined : Number(values.bound);
-  if (boundRad !== undefined && !(boundRad > 0)) throw new UnusableArguments(`--bound ${values.bound}: a positive angle in rad is needed`);
+  if (boundRad !== undefined && !(boundRad > 0 && Number.isFinite(boundRad)))
+    throw new UnusableArguments(`--bound ${values.bound}: a positive angle in rad is needed`);
   return {
     path,
     trials: values.trials === undefined ? usualTrials : Number(values.trials),

@@ -1,8 +1,10 @@
 import { inputWords, unitOfInput } from '@/shared/evaluation/input-words';
+import { sameSamplesWords } from '@/shared/evaluation/method-words';
+import { monteCarloWords } from '@/shared/evaluation/monte-carlo-words';
 import { residualAllan } from '@/shared/evaluation/residual-allan';
 import type { EvaluationResult } from '@/shared/evaluation/result';
-import { formatFixed, formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
-import { formatUncertain, uncertainParts } from '@/shared/lib/format-uncertain';
+import { formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
+import { formatUncertain } from '@/shared/lib/format-uncertain';
 import type { ReportInput } from '../interfaces/report';
 import { ReportPage, wholePlotPt } from './report-page';
 import { plotAllan, plotCentres, plotFits, plotReversals } from './report-plots';
@@ -55,7 +57,7 @@ function about(page: ReportPage, { run, evaluation, frozen, result, chainHead }:
 }
 
 function resultPart(page: ReportPage, { result }: ReportInput): void {
-  const { G, relativeU, codata, monteCarlo } = result;
+  const { G, relativeU, codata } = result;
   page.heading('Result');
   if (G === null) return;
   page.line(`G = ${ofG(G.value, G.u)}`, { strong: true, size: 14 });
@@ -63,20 +65,8 @@ function resultPart(page: ReportPage, { result }: ReportInput): void {
     `In brackets the standard uncertainty (k = 1)${relativeU === null ? '' : `, ${formatPercent(relativeU)} of G`}${G.degreesOfFreedom === null ? '' : `; ${formatSignificant(G.degreesOfFreedom, 2)} degrees of freedom`}.`,
   );
   page.line(`CODATA 2022: ${ofG(codata.value, codata.u)}${codata.En === null ? '' : `; En = ${formatSignificant(codata.En, 2)}`}.`);
-  if (monteCarlo !== null) {
-    const { trials, G_mean: mean, G_u: u, interval95 } = monteCarlo;
-    // As many digits as u has; the interval is itself the uncertainty.
-    const end = (at: number) => {
-      const { value, factor, unit } = uncertainParts({ value: at, u: u ?? G.u ?? 0, unit: UNIT_OF_G });
-      return value + factor + unit;
-    };
-    const found = [
-      ...(mean === null ? [] : [ofG(mean, u)]),
-      ...(u === null ? ['no standard deviation, for an input has two degrees of freedom at most'] : []),
-      ...(interval95 === null ? [] : [`95 % interval from ${end(interval95[0])} to ${end(interval95[1])}`]),
-    ];
-    page.line(`Monte Carlo (JCGM 101, ${formatFixed(trials, { decimals: 0 })} trials): ${found.join('; ')}.`);
-  }
+  const trials = monteCarloWords(result);
+  if (trials !== null) page.line(trials);
   page.line(`Method: ${result.method}${result.registered === null ? '' : result.registered ? ', as registered' : ', not as registered'}.`);
 }
 
@@ -106,6 +96,7 @@ function methodsPart(page: ReportPage, { methods }: EvaluationResult): void {
     difference === null ? '–' : ofG(difference.value, difference.u),
   ]);
   page.table([['Method', 'G', 'Difference from the result'], ...rows], [0.18, 0.45, 0.37]);
+  page.line(`The u of a difference leaves out what the methods share of the rig. ${sameSamplesWords}`, { size: 8 });
 }
 
 function budgetPart(page: ReportPage, { result: { budget }, rig }: ReportInput): void {

@@ -1,13 +1,16 @@
 import { CODATA_2022_G } from '@/shared/physics/constants';
 import type { EvaluationResult } from '../evaluation/result';
+import { UNIT_OF_G } from '../lib/format-number';
+import { formatUncertain } from '../lib/format-uncertain';
 import type { ProtocolDocument } from '../protocol/document';
 import type { RigDocument } from '../rig/document';
 import type { Sha256OfBytes } from './archive-types';
 import { appendEvent, canonicalJson, emptyChain } from './chain';
 import { channelCsv, channelPath } from './channel-csv';
-import { citationText, crateMetadata, type DescribedRun } from './describe-archive';
+import { citationText, crateMetadata, type DescribedEvaluation, type DescribedRun } from './describe-archive';
 import { exclusionsCsv, exclusionsFile, type Exclusion } from './exclusions';
 import { notesCsv, notesFile, type StepNote } from './notes';
+import { readmeFile, readmeText } from './readme-text';
 import type { ChainedEvent, ChannelSeries, SimulatedRun, StepRow } from './run-records';
 import { stepsCsv, stepsFile } from './step-csv';
 import { channelSchema, exclusionsSchema, notesSchema, stepsSchema, type TableSchema } from './table-schema';
@@ -86,7 +89,7 @@ function hashedOnce(sha256: Sha256OfBytes): Sha256OfBytes {
   };
 }
 
-/** RO-Crate metadata and citation, which describe all the other files. */
+/** RO-Crate metadata, citation and a text for people, which describe all the other files. */
 function descriptions(input: BuildArchiveInput, files: readonly FileEntry[], sha256: Sha256OfBytes): FileEntry[] {
   const { run, createdAt, software } = input;
   const described: DescribedRun = {
@@ -98,14 +101,26 @@ function descriptions(input: BuildArchiveInput, files: readonly FileEntry[], sha
     endedAt: iso(run.endedAtUtcMs),
     software,
     licenses: licensesOf(input),
+    evaluation: describedEvaluation(input),
   };
   const citation: FileEntry = {
     path: 'CITATION.cff',
     bytes: utf8(citationText(described)),
     facts: { name: 'citation', format: 'cff', mediatype: 'application/yaml', encoding: 'utf-8' },
   };
-  const all = [...files, citation].map(({ path, bytes, facts }) => ({ path, bytes, mediatype: String(facts.mediatype) }));
-  return [citation, jsonFile('ro-crate-metadata.json', crateMetadata(described, all, sha256))];
+  const readme: FileEntry = {
+    path: readmeFile,
+    bytes: utf8(readmeText(described)),
+    facts: { name: 'readme', format: 'md', mediatype: 'text/markdown', encoding: 'utf-8' },
+  };
+  const all = [...files, citation, readme].map(({ path, bytes, facts }) => ({ path, bytes, mediatype: String(facts.mediatype) }));
+  return [citation, readme, jsonFile('ro-crate-metadata.json', crateMetadata(described, all, sha256))];
+}
+
+function describedEvaluation({ evaluation }: BuildArchiveInput): DescribedEvaluation | null {
+  if (evaluation == null) return null;
+  const { G, frozen } = evaluation;
+  return { ...frozen, result: G === null ? null : formatUncertain({ value: G.value, u: G.u, unit: UNIT_OF_G }) };
 }
 
 const iso = (utcMs: number | null) => (utcMs === null ? null : new Date(utcMs).toISOString());

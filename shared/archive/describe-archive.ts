@@ -12,6 +12,19 @@ export interface DescribedRun {
   endedAt: string | null;
   software: string;
   licenses: readonly { name: string; title?: string; path?: string }[];
+  /** The frozen evaluation that the archive holds; null without one. */
+  evaluation: DescribedEvaluation | null;
+}
+
+export interface DescribedEvaluation {
+  /** When it was frozen, ISO 8601 UTC, by whom and why. */
+  at: string;
+  by: string;
+  reason: string;
+  /** Version of the software that computed it. */
+  software: string | null;
+  /** G with its standard uncertainty and unit, in words; null where it gives none. */
+  result: string | null;
 }
 
 export interface DescribedFile {
@@ -21,7 +34,12 @@ export interface DescribedFile {
 }
 
 const about = (run: DescribedRun) =>
-  `Records of one torsion-balance run: rig, protocol, step log, event chain and channels, with all that is needed to compute its result again. Run ${run.runId}.`;
+  `Records of one torsion-balance run: rig, protocol, step log, event chain and channels, with all that is needed to compute its result again. Run ${run.runId}.${foundWords(run.evaluation)}`;
+
+function foundWords(evaluation: DescribedEvaluation | null): string {
+  if (evaluation?.result == null) return '';
+  return ` Frozen evaluation of ${evaluation.at.slice(0, 10)}: G = ${evaluation.result} (standard uncertainty in brackets).`;
+}
 
 const ref = (id: string) => ({ '@id': id });
 
@@ -33,6 +51,7 @@ export function crateMetadata(run: DescribedRun, files: readonly DescribedFile[]
   const licence = run.licenses[0];
   const licenceId = licence?.path ?? '#licence';
   const fileIds = files.map(({ path }) => encodeURI(path));
+  const { evaluation } = run;
   const operator = run.operator === '' ? null : { '@id': '#operator', '@type': 'Person', name: run.operator };
   return {
     '@context': 'https://w3id.org/ro/crate/1.2/context',
@@ -53,7 +72,7 @@ export function crateMetadata(run: DescribedRun, files: readonly DescribedFile[]
         license: ref(licenceId),
         ...(operator === null ? {} : { author: ref('#operator') }),
         hasPart: [...fileIds, 'datapackage.json'].map(ref),
-        mentions: ref('#run'),
+        mentions: evaluation === null ? ref('#run') : ['#run', '#evaluation'].map(ref),
       },
       {
         '@id': '#run',
@@ -63,8 +82,9 @@ export function crateMetadata(run: DescribedRun, files: readonly DescribedFile[]
         ...(operator === null ? {} : { agent: ref('#operator') }),
         ...(run.startedAt === null ? {} : { startTime: run.startedAt }),
         ...(run.endedAt === null ? {} : { endTime: run.endedAt }),
-        result: fileIds.map(ref),
+        result: fileIds.filter((id) => evaluation === null || id !== evaluationFile).map(ref),
       },
+      ...(evaluation === null ? [] : evaluationEntities(evaluation, fileIds)),
       { '@id': '#software', '@type': 'SoftwareApplication', name: run.software },
       ...(operator === null ? [] : [operator]),
       { '@id': licenceId, '@type': 'CreativeWork', name: licence?.title ?? licence?.name ?? 'No licence stated' },
@@ -79,6 +99,27 @@ export function crateMetadata(run: DescribedRun, files: readonly DescribedFile[]
       { '@id': 'datapackage.json', '@type': 'File', name: 'datapackage.json', encodingFormat: 'application/json' },
     ],
   };
+}
+
+const evaluationFile = 'evaluation.json';
+
+/** The evaluation as an action of its own, from the run's files to `evaluation.json`, with who froze it and what computed it. */
+function evaluationEntities({ at, by, reason, software, result }: DescribedEvaluation, fileIds: readonly string[]): object[] {
+  return [
+    {
+      '@id': '#evaluation',
+      '@type': 'CreateAction',
+      name: 'Frozen evaluation',
+      description: [...(result === null ? [] : [`G = ${result}`]), ...(reason === '' ? [] : [`Frozen because: ${reason}`])].join('. '),
+      instrument: ref('#evaluation-software'),
+      agent: ref('#evaluator'),
+      endTime: at,
+      object: fileIds.filter((id) => id !== evaluationFile).map(ref),
+      result: ref(evaluationFile),
+    },
+    { '@id': '#evaluation-software', '@type': 'SoftwareApplication', name: `Evenfall ${software ?? 'of a version not kept'}` },
+    { '@id': '#evaluator', '@type': 'Person', name: by === '' ? 'not stated' : by },
+  ];
 }
 
 /** `CITATION.cff`. Every text is written as a JSON string, which is a double-quoted scalar of YAML 1.2. */

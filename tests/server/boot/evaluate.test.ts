@@ -71,6 +71,7 @@ describe('evaluate', () => {
     ['an unknown method', [folder, '--method', 'guess'], '--method guess: there are equilibrium'],
     ['modulation where nothing turned', [folder, '--method', 'modulation'], 'steps.csv: the method "modulation" needs a rotation'],
     ['a bound that is none', [folder, '--bound', 'wide'], '--bound wide: a positive angle'],
+    ['a bound without end', [folder, '--bound', 'Infinity'], '--bound Infinity: a positive angle'],
     ['trials that are none', [folder, '--trials', '-5'], '--trials'],
     ['a channel that is not there', [folder, '--channel', 'laser'], 'there is no channel "laser"'],
     ['a file that is no archive', ['package.json'], 'not a readable ZIP'],

@@ -80,6 +80,11 @@ test('the report tells G with its u and unit, the budget, the software and the h
     'Budget of uncertainty',
     'mrad',
     'µrad',
+    'near − far at each reversal, mrad; line and band: the result ± u',
+    'residuals as usual',
+    'the greatest residuals',
+    'data − fit, µrad',
+    'overlapping Allan deviation, µrad, with ± u; dashed: white noise',
   ])
     expect(text).toContain(words);
   expect(text).not.toContain('?');

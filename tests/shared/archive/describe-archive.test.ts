@@ -63,3 +63,29 @@ test('CITATION.cff has the keys that its format requires, whatever the title hol
   expect(lines).toContain(String.raw`title: "Night: \"far\" # 3\nand more"`);
   expect(read(odd).warnings).toEqual([]);
 });
+
+describe('with a frozen evaluation', () => {
+  const G = { value: 6.6745e-11, u: 2.7e-13, degreesOfFreedom: 30 };
+  const frozen = { at: '2026-03-02T07:00:00.000Z', by: 'Tam Ferrowdale', reason: 'for the thesis', software: '0.1.0', channel: 'deflection' };
+  const evaluation = { G, frozen } as unknown as NonNullable<typeof input.evaluation>;
+  const held = buildArchive({ ...input, evaluation }, sha256Hex);
+  const entities = (json(held.get('ro-crate-metadata.json')) as unknown as { '@graph': Entity[] })['@graph'];
+  const found = (id: string) => entities.find((one) => one['@id'] === id);
+
+  test('the crate tells of the evaluation as an action from the files of the run to evaluation.json, with person and program', () => {
+    const action = found('#evaluation');
+    expect(action).toMatchObject({ '@type': 'CreateAction', endTime: frozen.at, result: { '@id': 'evaluation.json' } });
+    expect(ids(action?.object)).toEqual(expect.arrayContaining(['rig.json', 'steps.csv', 'channels/deflection.csv']));
+    expect(ids(action?.object)).not.toContain('evaluation.json');
+    expect(ids(found('#run')?.result)).not.toContain('evaluation.json');
+    expect(found('#evaluator')?.name).toBe('Tam Ferrowdale');
+    expect(found('#evaluation-software')?.name).toBe('Evenfall 0.1.0');
+    expect(String(action?.description)).toContain('for the thesis');
+  });
+
+  test('the citation and the text for people tell G with its uncertainty and unit', () => {
+    for (const path of ['CITATION.cff', 'README.md'])
+      expect(text(held.get(path)).replaceAll('\u202f', ' ')).toContain('G = 6.675(27) × 10⁻¹¹ m³ kg⁻¹ s⁻²');
+    expect(text(files.get('README.md'))).toContain('no frozen evaluation');
+  });
+});
