@@ -44,6 +44,19 @@ test('a gap between bins does not make two neighbours of what lies far apart', (
   expect(residualAllan([curve])[0]?.deviationRad).toBeGreaterThan(5e-6);
 });
 
+// Degrees of freedom of the sum of the squared second differences of white noise: tr(M)²/tr(M²) with M their covariance, worked out apart.
+test.each([
+  [1000, 1, 666.2223],
+  [60, 4, 19.1251],
+  [120, 16, 9.1207],
+])('the u of one dwell of %d bins, %d averaged, is that of %f degrees of freedom', (length, m, freedom) => {
+  const normal = normalDeviates(9);
+  const tS = Array.from({ length }, (_, k) => widthS * k);
+  const curve = { seq: 1, station: 'near', startUtcMs: 0, tS, modelRad: tS.map(() => 0), dataRad: tS.map(() => normal()) };
+  const { deviationRad, u } = residualAllan([curve]).find(({ tauS }) => tauS === m * widthS) ?? { deviationRad: NaN, u: NaN };
+  expect(Math.abs((deviationRad / u) ** 2 / 2 / freedom - 1)).toBeLessThan(0.02);
+});
+
 test('too little for a slope says nothing', () => {
   expect(allanWords(residualAllan([]))).toBeNull();
 });
