@@ -11,6 +11,7 @@ import type { EvaluationResult } from '@/shared/evaluation/result';
 import { formatDayAndClock } from '@/shared/lib/format-time';
 import { AllanPanel } from './allan-panel';
 import { BudgetPanel } from './budget-panel';
+import { DriftsPanel } from './drifts-panel';
 import { DwellList } from './dwell-list';
 import { EvaluatePanel } from './evaluate-panel';
 import { registeredWords, softwareWords } from './evaluation-words';
@@ -123,6 +124,7 @@ function Evaluated({ view, evaluation, result, panel, back, choice, freeze }: Ev
       <BudgetPanel result={result} rig={view.rig} />
       <TryPanel result={result} rig={view.rig} basis={evaluation.basis} />
       <MethodsPanel result={result} />
+      <DriftsPanel result={result} />
       <AllanPanel curves={curves} />
       <SurroundingsPanel result={result} />
       <Chain chain={result.chain} />

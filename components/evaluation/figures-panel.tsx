@@ -27,7 +27,7 @@ export function FiguresPanel({ result }: { result: EvaluationResult }) {
       )}
       {period === null ? null : <Figure name="damped period" {...period} unit="s" />}
       {decay === null ? null : <Figure name="decay time" {...decay} unit="s" />}
-      {kappa === null ? null : <Figure name="κ of the fibre" {...kappa} unit={'N\u202fm'} />}
+      {kappa === null ? null : <Figure name="κ of the fibre" {...kappa} unit={'N\u202fm/rad'} />}
       {offset === null ? null : (
         <Figure name={alignment?.applied ? 'clock offset, applied' : 'clock offset, not applied'} {...offset} unit="s" />
       )}

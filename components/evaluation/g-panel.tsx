@@ -56,8 +56,8 @@ function TrueG({ value, u, trueG }: { value: number; u: number | null; trueG: nu
   const sigmas = u === null || u === 0 ? null : Math.abs(off) / u;
   return (
     <Label testID="true-g">
-      true G of the simulator is <Num size={13}>{formatSignificant(trueG * 1e11, 6)}</Num> × 10⁻¹¹ {UNIT_OF_G}; found {off < 0 ? 'below' : 'above'} it
-      by {formatPercent(Math.abs(off / trueG))}
+      true G of the simulator is <Num size={13}>{formatSignificant(trueG * 1e11, 6)}</Num> × 10⁻¹¹ {UNIT_OF_G}; found{' '}
+      {off < 0 ? 'below' : 'above'} it by {formatPercent(Math.abs(off / trueG))}
       {sigmas === null ? '' : `, ${formatSignificant(sigmas, 2)} u`}
     </Label>
   );

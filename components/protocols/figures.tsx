@@ -68,7 +68,7 @@ export function Figures({ plan, forecast, timeZone, startAt }: FiguresProps) {
             <Num size={17} testID="figure-u">
               {formatPercent(forecast.predicted.relativeU)}
             </Num>
-            <Label>u(G) of G after the night</Label>
+            <Label>u(G)/G after the night</Label>
           </View>
         )}
       </View>

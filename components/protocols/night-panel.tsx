@@ -94,9 +94,9 @@ function Wanted({ forecast: { cadence }, rig }: { forecast: NightForecast; rig: 
   return (
     <View className="gap-2">
       <Field
-        label="Wanted u(G)"
+        label="Wanted u(G)/G"
         mono
-        unit="% of G"
+        unit="%"
         value={text}
         onChange={setText}
         error={isWrong ? 'a number above 0, for example 0.4' : undefined}

@@ -30,7 +30,7 @@ export function strategyLines({ strategies }: NightForecast): StrategyLine[] {
   return strategies.map(({ strategy, cadence: { dwells, cycleS, dwellS }, predicted: { relativeU, statistics } }) => ({
     name: strategyNames[strategy],
     under: `best beat ${formatDuration(cycleS)}, dwell ${formatDuration(dwellS)}, ${pairsOf(dwells)}; dwells alone ${formatPercent(statistics)}`,
-    u: formatPercent(relativeU),
+    u: formatPercent(relativeU, 3),
     best: statistics === least,
   }));
 }

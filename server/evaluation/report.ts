@@ -1,5 +1,5 @@
 import { inputWords, unitOfInput } from '@/shared/evaluation/input-words';
-import { sameSamplesWords } from '@/shared/evaluation/method-words';
+import { driftWords, sameSamplesWords } from '@/shared/evaluation/method-words';
 import { monteCarloWords } from '@/shared/evaluation/monte-carlo-words';
 import { residualAllan } from '@/shared/evaluation/residual-allan';
 import type { EvaluationResult } from '@/shared/evaluation/result';
@@ -114,9 +114,16 @@ function budgetPart(page: ReportPage, { result: { budget }, rig }: ReportInput):
 }
 
 function reversalsPart(page: ReportPage, result: EvaluationResult): void {
-  if (result.reversal_rad === null) return;
+  const { reversal_rad: reversal, drifts = [] } = result;
+  if (reversal === null) return;
   page.heading('Reversals over the night', wholePlotPt);
   plotReversals(page, result);
+  if (drifts.length < 2) return;
+  const rows = drifts.map(({ drift, reversal_rad: { value, u } }) => [
+    driftWords(drift),
+    formatUncertain({ value: value * 1e3, u: u === null ? null : u * 1e3, unit: 'mrad' }),
+  ]);
+  page.table([['Drift taken off by', 'near − far'], ...rows], [0.5, 0.5]);
 }
 
 function dwellsPart(page: ReportPage, { dwells }: EvaluationResult): void {

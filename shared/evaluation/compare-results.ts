@@ -76,7 +76,7 @@ function collectObject(leaves: Leaves, path: string, { value, u, ...others }: Re
 /** What tells a line of a list from its neighbours, so that one line more does not make all that follow differ. */
 function nameOf(item: unknown): string | null {
   if (typeof item !== 'object' || item === null) return null;
-  for (const key of ['seq', 'input', 'channel', 'method', 'code', 'tau_s'] as const)
+  for (const key of ['seq', 'input', 'channel', 'method', 'drift', 'code', 'tau_s'] as const)
     if (key in item) return String((item as Record<string, unknown>)[key]);
   return null;
 }

@@ -5,6 +5,7 @@ import { CODATA_2022_G } from '../physics/constants';
 import { inertiaKgM2 } from '../physics/oscillator';
 import { SingularMatrixError } from '../statistics/symmetric';
 import { analyse, type Analysis } from './analysis';
+import { driftsBeside } from './drifts';
 import { controlTest } from './empty-control';
 import { regressionsOf, type Regressions } from './environment';
 import type { Known } from './free-oscillator';
@@ -65,6 +66,7 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     ...(hasSwings(archive) || !byDwells ? {} : { pretend: pretendOf(analysis) }),
     ...(regressions.length === 0 ? {} : { regressions }),
     ...(options.besides !== true || found === null ? {} : { methods: methodsBeside(archive, plan, { whole, ...found }) }),
+    ...(options.besides !== true || !byDwells || reversal === null ? {} : { drifts: driftsBeside(analysis, plan.order) }),
     warnings: [
       ...archive.warnings,
       ...registrationWarnings(archive, plan),

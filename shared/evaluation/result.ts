@@ -79,6 +79,13 @@ const methodResultSchema = z.strictObject({
 });
 export type MethodResult = z.infer<typeof methodResultSchema>;
 
+/** Near minus far with the drift taken off in one way: ABA windows, a polynomial, or generalised least squares against a zero that walks. */
+const driftResultSchema = z.strictObject({
+  drift: z.enum(['aba', 'polynomial', 'gls']),
+  reversal_rad: z.strictObject({ value: z.number(), u: z.number().nullable() }),
+});
+export type DriftResult = z.infer<typeof driftResultSchema>;
+
 export const evaluationResultSchema = z.strictObject({
   formatVersion: z.literal(1),
   method: z.enum(methods),
@@ -113,6 +120,8 @@ export const evaluationResultSchema = z.strictObject({
   regressions: z.array(regressionResultSchema).optional(),
   /** Absent where the other methods were not tried. */
   methods: z.array(methodResultSchema).optional(),
+  /** Absent where the other ways of taking the drift off were not tried, or there is no difference of dwells. */
+  drifts: z.array(driftResultSchema).optional(),
   warnings: z.array(z.strictObject({ code: z.string(), message: z.string() })),
 });
 export type EvaluationResult = z.infer<typeof evaluationResultSchema>;

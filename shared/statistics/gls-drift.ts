@@ -56,7 +56,8 @@ export function walkFit(series: readonly SidedValue[], ratio: number): WalkFit {
 function covarianceOf(series: readonly SidedValue[], ratio: number): Matrix {
   const [first, last] = [series[0]?.timeS ?? 0, series.at(-1)?.timeS ?? 0];
   const intervalS = (last - first) / Math.max(1, series.length - 1) || 1;
-  const since = series.map(({ timeS }) => (timeS - first) / intervalS);
+  // Since the first dwell began, or longer ago: the constant takes up whatever the walk did before.
+  const since = series.map(({ timeS }) => (timeS - first + (series[0]?.lengthS ?? 0)) / intervalS);
   // The walk's mean over a dwell varies less than the walk at its middle, by a sixth of its length.
   const own = series.map(({ lengthS = 0 }) => 1 - (ratio * lengthS) / 6 / intervalS);
   return since.map((a, i) => since.map((b, j) => (i === j ? (own[i] as number) : 0) + ratio * Math.min(a, b)));

@@ -66,7 +66,13 @@ test('CITATION.cff has the keys that its format requires, whatever the title hol
 
 describe('with a frozen evaluation', () => {
   const G = { value: 6.6752e-11, u: 2.7e-13, degreesOfFreedom: 30 };
-  const frozen = { at: '2026-03-02T07:00:00.000Z', by: 'Tam Ferrowdale', reason: 'for the thesis', software: '0.1.0', channel: 'deflection' };
+  const frozen = {
+    at: '2026-03-02T07:00:00.000Z',
+    by: 'Tam Ferrowdale',
+    reason: 'for the thesis',
+    software: '0.1.0',
+    channel: 'deflection',
+  };
   const evaluation = { G, frozen } as unknown as NonNullable<typeof input.evaluation>;
   const held = buildArchive({ ...input, evaluation }, sha256Hex);
   const entities = (json(held.get('ro-crate-metadata.json')) as unknown as { '@graph': Entity[] })['@graph'];

@@ -91,6 +91,29 @@ describe('the methods beside each other', () => {
   });
 });
 
+describe('the ways to take the drift off beside each other', () => {
+  const normal = normalDeviates(23);
+  const noisy = (angle: number) => angle + 1e-6 * normal();
+
+  test('are three for dwells by turns, the result among them, and agree where there is noise alone', () => {
+    const plan = { rig: unmeasured(), anglesDeg: alternatingAngles(9, near, -near), dwellS: 900, reading: noisy };
+    const { reversal_rad: reversal, drifts = [] } = evaluateNight(plan, { besides: true }).result;
+    expect(drifts.map(({ drift }) => drift)).toEqual(['aba', 'polynomial', 'gls']);
+    expect(drifts[0]?.reversal_rad).toEqual({ value: reversal?.value, u: reversal?.u });
+    for (const { reversal_rad: one } of drifts.slice(1)) {
+      expect(Math.abs(one.value - (reversal?.value ?? NaN))).toBeLessThan(4 * (one.u ?? NaN));
+      expect(one.value).not.toBe(reversal?.value);
+    }
+    expect(evaluateNight(plan, {}).result.drifts).toBeUndefined();
+  });
+
+  test('are without windows where the dwells do not alternate', () => {
+    const anglesDeg = [near, -near, -near, near, -near, -near, near, -near];
+    const { drifts = [] } = evaluateNight({ rig: unmeasured(), anglesDeg, dwellS: 900, reading: noisy }, { besides: true }).result;
+    expect(drifts.map(({ drift }) => drift)).toEqual(['polynomial', 'gls']);
+  });
+});
+
 test('generalised least squares against a wandering zero: the cost of 48 dwells (physics.md D4)', () => {
   const series = Array.from({ length: 48 }, (_, k) => ({ timeS: 1000 * k, side: k % 2 === 0 ? (1 as const) : (-1 as const), value: 0 }));
   const cost = (ratio: number) => (48 * walkFit(series, ratio).unitVariance) / 4;

@@ -9,7 +9,10 @@ import { relativeDifference } from '../../support/check-data';
 /** Null is given where a distribution has no such moment: not here. */
 function propagated(seed: number, model: (draw: (law: Law) => number) => number) {
   const [source] = seededStreams(seed, 1) as [GaussianSource];
-  const { G_mean, G_u, interval95 } = summarised(Float64Array.from({ length: 200_000 }, () => model((law) => drawn(law, source))), []);
+  const { G_mean, G_u, interval95 } = summarised(
+    Float64Array.from({ length: 200_000 }, () => model((law) => drawn(law, source))),
+    [],
+  );
   return { G_mean: G_mean ?? NaN, G_u: G_u ?? NaN, interval95: interval95 ?? [NaN, NaN] };
 }
 
@@ -59,7 +62,10 @@ test('a null that is shown and one that is merely not significant', () => {
 });
 
 test('an input of so few degrees of freedom that its distribution has no standard deviation, or no mean, gives none', () => {
-  const { G_mean, G_u, interval95 } = summarised(Float64Array.from({ length: 100 }, (_, k) => k), [{ law: { kind: 't', nu: 2 }, u: 1 }]);
+  const { G_mean, G_u, interval95 } = summarised(
+    Float64Array.from({ length: 100 }, (_, k) => k),
+    [{ law: { kind: 't', nu: 2 }, u: 1 }],
+  );
   expect([G_mean, G_u, interval95]).toEqual([49.5, null, [2, 97]]);
   expect(summarised(Float64Array.of(3, 4), [{ law: { kind: 't', nu: 1 }, u: 1 }])).toMatchObject({ G_mean: null, G_u: null });
   // Its u counts only where there is one.
