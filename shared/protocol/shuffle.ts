@@ -37,9 +37,13 @@ export function orderedPass({ steps, order }: RepeatStep, path: string, seed: nu
   return { steps: places.map((place) => steps[place] as Step), order: places };
 }
 
+/** The generator's first outputs hang on its seed too plainly. */
+const outputsUnused = 16;
+
 /** Every order is as likely as any other: Fisher and Yates's shuffle, the places drawn from the name's own stream. */
 function shuffledPlaces(count: number, name: string): number[] {
   const random = xoroshiro128plus(hashOf(name));
+  for (let output = 0; output < outputsUnused; output += 1) random.next();
   const places = Array.from({ length: count }, (_, place) => place);
   for (let last = count - 1; last > 0; last -= 1) {
     const other = uniformInt(random, 0, last);
@@ -48,9 +52,14 @@ function shuffledPlaces(count: number, name: string): number[] {
   return places;
 }
 
-/** FNV-1a, 32 bits: names that differ by one pass give streams that have nothing to do with each other. */
+/**
+ * FNV-1a, 32 bits, and then MurmurHash3's finalizer. FNV alone would not do: its lowest bit is the parity of the name's characters,
+ * and the generator's first output is the seed's complement, so that two children would change places with every pass.
+ */
 function hashOf(name: string): number {
   let hash = 0x811c9dc5;
   for (let index = 0; index < name.length; index += 1) hash = Math.imul(hash ^ name.charCodeAt(index), 0x01000193);
-  return hash | 0;
+  hash = Math.imul(hash ^ (hash >>> 16), 0x85ebca6b);
+  hash = Math.imul(hash ^ (hash >>> 13), 0xc2b2ae35);
+  return (hash ^ (hash >>> 16)) | 0;
 }

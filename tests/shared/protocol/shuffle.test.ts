@@ -60,6 +60,29 @@ test('the same seed gives the same orders; all orders are about as frequent', ()
   for (const count of counts.values()) expect(Math.abs(count - 100)).toBeLessThan(36);
 });
 
+test.each([2, 4])('no order hangs on that of the pass before, nor on how many passes ago it was: %d children', (count) => {
+  const passes = 600;
+  const orders = run([shuffled(passes, ...letters(count))], 7).drawn.map(({ order }) => order);
+  const kinds = count === 2 ? 2 : 24;
+  for (const lag of [1, 2, 3, 4, 10]) {
+    // Binomial: 600 draws, each with the chance 1/kinds; four standard deviations and a half.
+    const pairs = passes - lag;
+    const same = orders.slice(lag).filter((order, pass) => order.join('') === orders[pass]?.join('')).length;
+    const chance = 1 / kinds;
+    expect(Math.abs(same - pairs * chance)).toBeLessThan(4.5 * Math.sqrt(pairs * chance * (1 - chance)));
+  }
+});
+
+test('the first passes of two children come in as many ways as there are', () => {
+  const eight = Array.from({ length: 64 }, (_, seed) =>
+    run([shuffled(8, ...letters(2))], seed)
+      .drawn.map(({ order }) => order[0])
+      .join(''),
+  );
+  // 64 draws of 256: 57 different ones are expected, with a standard deviation of about 2.5.
+  expect(new Set(eight).size).toBeGreaterThan(44);
+});
+
 test('nested: the inner one draws anew in each pass of the outer, and both are told before the first step', () => {
   const { drawn, items } = run([shuffled(4, shuffled(2, ...letters(3)), once(mark('z')))], 3);
   expect(items).toHaveLength(4 * 7);
