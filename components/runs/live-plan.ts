@@ -5,12 +5,16 @@ import { planTimeline } from '@/shared/protocol/timeline';
 /** The rest of the night as it stands now: the plan from the step that is going on, moved to where that step really ends. Pure. */
 
 /** The whole protocol as planned from its start; null where it cannot be planned (not started, or steps of a later version). */
-export function plannedItems(view: Pick<RunView, 'protocol' | 'rig' | 'startedAt'>, timeZone: string): readonly PlannedStep[] | null {
+export function plannedItems(
+  view: Pick<RunView, 'protocol' | 'rig' | 'startedAt' | 'shuffleSeed'>,
+  timeZone: string,
+): readonly PlannedStep[] | null {
+  const { protocol, rig, shuffleSeed } = view;
   if (view.startedAt === null) return null;
   try {
     return planTimeline(
-      { protocol: view.protocol, rig: view.rig, timeZone },
-      { utcMs: Date.parse(view.startedAt), angleDeg: view.rig.motion?.homeDeg ?? 0 },
+      { protocol, rig, timeZone, ...(shuffleSeed === undefined ? {} : { shuffleSeed }) },
+      { utcMs: Date.parse(view.startedAt), angleDeg: rig.motion?.homeDeg ?? 0 },
     ).items;
   } catch {
     return null;

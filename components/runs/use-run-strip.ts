@@ -28,10 +28,11 @@ export function useRunStrip(runId: string, state: LiveState, timeZone: string): 
   const rig = view?.rig ?? null;
   const protocol = view?.protocol ?? null;
   const startedAt = view?.startedAt ?? null;
+  const shuffleSeed = view?.shuffleSeed;
   const runState = view?.state ?? null;
   const items = useMemo(
-    () => (rig === null || protocol === null ? null : plannedItems({ rig, protocol, startedAt }, timeZone)),
-    [rig, protocol, startedAt, timeZone],
+    () => (rig === null || protocol === null ? null : plannedItems({ rig, protocol, startedAt, shuffleSeed }, timeZone)),
+    [rig, protocol, startedAt, shuffleSeed, timeZone],
   );
   const night = useMemo(() => (runState === null ? { steps: [], items: [] } : nightPlan(runState, rows, items)), [runState, rows, items]);
 

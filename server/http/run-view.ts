@@ -85,6 +85,7 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
     protocol: start.protocol,
     simulated:
       start.simulated === null ? null : { trueG: start.simulated.trueG, seed: start.simulated.seed, rateHz: start.simulated.rateHz },
+    ...(start.shuffleSeed === undefined ? {} : { shuffleSeed: start.shuffleSeed }),
   };
 }
 

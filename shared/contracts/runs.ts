@@ -58,6 +58,8 @@ export const runViewSchema = runSummarySchema.extend({
   rig: rigDocumentSchema,
   protocol: protocolDocumentSchema,
   simulated: z.strictObject({ trueG: z.number(), seed: z.number(), rateHz: z.number() }).nullable(),
+  /** From which the order of shuffled repeats is drawn; absent where the protocol has none. */
+  shuffleSeed: z.number().int().optional(),
 });
 export type RunView = z.infer<typeof runViewSchema>;
 

@@ -1,9 +1,11 @@
 import { shiftedBy, toRad, zeroOffset } from '@/components/runs/deflection-series';
 import { nightPlan, plannedItems } from '@/components/runs/live-plan';
 import { filterChoices, filterSteps, noFilter, outcomeOf } from '@/components/runs/step-filter';
+import type { Step } from '@/shared/protocol/document';
+import { planTimeline } from '@/shared/protocol/timeline';
 import { leverOf, spotM } from '@/shared/physics/lever';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
-import { nowUtcMs, rowsAt, timeline, timeZone, viewAt } from '../fixtures/run';
+import { nowUtcMs, protocol, rowsAt, startUtcMs, timeline, timeZone, viewAt } from '../fixtures/run';
 
 const view = viewAt(nowUtcMs);
 const items = plannedItems(view, timeZone);
@@ -32,6 +34,25 @@ test('a dwell cut short by a hold is to be done again; a run that is over has no
   const held = nightPlan('held', rows, items).steps;
   expect(held[rows.length]?.kind).toBe('dwell');
   expect(nightPlan('stopped', rows, items).steps).toHaveLength(rows.length);
+});
+
+test('shuffled blocks to come are those of the run, in the order that its seed gives', () => {
+  const block = (to: string): Step => ({
+    kind: 'repeat',
+    times: 1,
+    steps: [
+      { kind: 'swing', to },
+      { kind: 'dwell', for_s: 60 },
+    ] as Step[],
+  });
+  const blocks: Step = { kind: 'repeat', times: 6, order: 'shuffled', steps: ['near', 'far', 'clear'].map(block) };
+  const shuffled = { ...protocol, steps: [{ kind: 'home' } as Step, blocks] };
+  const pathsOf = (shuffleSeed: number) => plannedItems({ ...view, protocol: shuffled, shuffleSeed }, timeZone)?.map(({ path }) => path);
+  for (const shuffleSeed of [1, 2, 3, 4_000_000_000]) {
+    const plan = { protocol: shuffled, rig: demoRigWide, timeZone, shuffleSeed };
+    expect(pathsOf(shuffleSeed)).toEqual(planTimeline(plan, { utcMs: startUtcMs, angleDeg: 0 }).items.map(({ path }) => path));
+  }
+  expect(pathsOf(2)).not.toEqual(pathsOf(1));
 });
 
 test('a run that has not started has no plan yet', () => {

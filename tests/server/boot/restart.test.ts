@@ -89,6 +89,7 @@ test('a shuffled protocol: the seed is drawn at the start, and the orders are th
   const events = await eventsOf(runId);
   const { shuffleSeed } = events.find(({ kind }) => kind === 'run-started')?.data ?? {};
   expect(Number.isInteger(shuffleSeed)).toBe(true);
+  expect(await lab.view(runId)).toMatchObject({ shuffleSeed });
   const orders = events.filter(({ kind }) => kind === 'order-drawn').map(({ data }) => data as { path: string; order: number[] });
   expect(orders.map(({ path }) => path)).toEqual([1, 2, 3].map((pass) => `2.repeat[${String(pass)}]`));
   const dwells = (await stepsOf(runId)).filter(({ path, outcome }) => path.endsWith('dwell') && outcome === 'done').map(({ path }) => path);
