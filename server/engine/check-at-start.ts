@@ -9,16 +9,17 @@ import { countingToleranceDeg } from './counted-angle';
 
 /** What the protocol is refused for when it starts now, with the sources where the controller says they stand; null: it has not answered. */
 export function checkAtStart(
-  { protocol, rig, timeZone }: Pick<RunStart, 'protocol' | 'rig' | 'timeZone'>,
+  run: Pick<RunStart, 'protocol' | 'rig' | 'timeZone' | 'shuffleSeed'>,
   controller: Pick<ControllerState, 'positionKnown' | 'angleDeg'> | null,
   utcMs: number,
 ): Finding[] {
+  const { protocol, rig, timeZone } = run;
   if (controller === null) return checkProtocol(protocol, rig);
   const angleDeg = controller.positionKnown && controller.angleDeg !== null ? withinLimits(controller.angleDeg, rig) : null;
   const start = { angleDeg, utcMs, timeZone };
   const refusals = checkProtocol(protocol, rig, start);
   if (refusals.length > 0) return refusals;
-  return excursionRefusals(rig, planTimeline({ protocol, rig, timeZone }, { utcMs, angleDeg: angleDeg ?? rig.motion?.homeDeg ?? 0 }));
+  return excursionRefusals(rig, planTimeline(run, { utcMs, angleDeg: angleDeg ?? rig.motion?.homeDeg ?? 0 }));
 }
 
 /** A counted angle may lie half a step of the motor beyond the limit at which the sources were sent to stand. */

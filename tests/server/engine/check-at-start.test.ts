@@ -1,5 +1,5 @@
 import { checkAtStart } from '@/server/engine/check-at-start';
-import type { ProtocolDocument } from '@/shared/protocol/document';
+import type { ProtocolDocument, Step } from '@/shared/protocol/document';
 import { templateById } from '@/shared/protocol/templates';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 
@@ -18,4 +18,27 @@ test('a run in which the pendulum would swing out beyond 0.8 of its travel, or l
   expect(codes(within(0.0015), null)).toEqual(['excursion']);
   expect(codes(within(0.05))).toEqual([]);
   expect(codes({ ...within(0.05), readout: { range_rad: 0.0012 } })).toEqual(['excursion']);
+});
+
+test('of a shuffled protocol the order is judged that the run will have', () => {
+  const block = (to: string): Step => ({
+    kind: 'repeat',
+    times: 1,
+    steps: [
+      { kind: 'swing', to },
+      { kind: 'dwell', for_s: 210 },
+    ] as Step[],
+  });
+  const blocks: Step = { kind: 'repeat', times: 1, order: 'shuffled', steps: ['near', 'near', 'near', 'far', 'far', 'far'].map(block) };
+  const rig = { ...demoRigWide, pendulum: { ...demoRigWide.pendulum, travel_rad: 0.0075 } };
+  const run = {
+    protocol: { formatVersion: 1, name: 'Shuffled', steps: [{ kind: 'home' }, blocks] } as ProtocolDocument,
+    rig,
+    timeZone: 'UTC',
+  };
+  const controller = { positionKnown: true, angleDeg: 0 };
+  const codesOf = (shuffleSeed: number) => checkAtStart({ ...run, shuffleSeed }, controller, 0).map(({ code }) => code);
+  // Near and far by turns, every half period, swing it up to 8.2 mrad; where two of a kind come together it swings back: 3.9 mrad. The limit is 6.
+  expect(codesOf(1)).toEqual([]);
+  expect(codesOf(6)).toEqual(['excursion']);
 });
