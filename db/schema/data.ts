@@ -1,5 +1,17 @@
 import { sql } from 'drizzle-orm';
-import { bigint, doublePrecision, foreignKey, index, integer, json, pgTable, primaryKey, text, uniqueIndex } from 'drizzle-orm/pg-core';
+import {
+  bigint,
+  doublePrecision,
+  foreignKey,
+  index,
+  integer,
+  json,
+  pgTable,
+  primaryKey,
+  smallint,
+  text,
+  uniqueIndex,
+} from 'drizzle-orm/pg-core';
 import type * as z from 'zod';
 import type { importMappingSchema, importPreviewSchema } from '../../shared/contracts/data';
 import type { GBasis } from '@/shared/evaluation/g-basis';
@@ -84,6 +96,29 @@ export const samples = pgTable(
     value: doublePrecision('value').notNull(),
   },
   (table) => [primaryKey({ columns: [table.labId, table.channelId, table.at] })],
+);
+
+/**
+ * What the samples of a channel come to in buckets of time, level by level: 2 s · 8ˡᵉᵛᵉˡ wide, aligned to the epoch. Recomputed with every write by the
+ * hand-written function `summarise_samples`; a bucket without samples has no row.
+ */
+export const sampleSummaries = pgTable(
+  'sample_summaries',
+  {
+    labId: key('lab_id').notNull(),
+    channelId: key('channel_id').notNull(),
+    level: smallint('level').notNull(),
+    /** Where the bucket begins. */
+    at: instant('at').notNull(),
+    count: bigint('count', { mode: 'number' }).notNull(),
+    /** In the channel's unit; of equal ones the first. */
+    least: doublePrecision('least').notNull(),
+    leastAt: instant('least_at').notNull(),
+    greatest: doublePrecision('greatest').notNull(),
+    greatestAt: instant('greatest_at').notNull(),
+    mean: doublePrecision('mean').notNull(),
+  },
+  (table) => [primaryKey({ columns: [table.labId, table.channelId, table.level, table.at] })],
 );
 
 export const imports = pgTable(

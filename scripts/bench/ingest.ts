@@ -9,21 +9,24 @@ import { readCsv } from '@/server/ingest/csv-read';
 import { inTurns } from '@/server/ingest/receive-file';
 import * as store from '@/server/store/imports';
 import { insertRun } from '@/server/store/run-store';
+import { createSampleStore } from '@/server/store/sample-store';
 import type { ImportMapping } from '@/shared/contracts/data';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { withDatabase, type BenchDatabase } from './lib/fresh-database';
 import { seedLab } from './lib/people';
-import { growth, report } from './report';
+import { sizesOf } from './lib/sizes';
+import { growth, quantile, report } from './report';
 
 /**
  * Stores CSV files of deflection as the import does: read from the kept pieces, parsed, checked, stored under the table's
  * key. The peer is PostgreSQL's own COPY of the same rows into the same table.
  */
 
-const sizes = [100_000, 300_000, 1_000_000];
+const sizes = sizesOf([100_000, 1_000_000, 10_000_000]);
 const startUtcMs = Date.UTC(2026, 0, 1);
 const intervalMs = 100;
 const rowsAPiece = 20_000;
+const batchesOfADevice = 200;
 const runId = '5eed0000-0000-4000-8000-000000000900';
 const { lab: labId, rig: rigId } = demoIds;
 
@@ -76,7 +79,8 @@ async function ingest(database: BenchDatabase, rows: number): Promise<number> {
   const file = await store.beginImport(connection.db, { labId, runId, fileName: 'bench.csv', createdAt: startUtcMs, createdBy: 'bench' });
   const key = { labId, importId: file.id };
   await store.keepPieces(connection.db, key, Readable.from(csvOf(rows)));
-  const work = { ...key, channel: channelOf(`file of ${String(rows)}`), storedAt: startUtcMs, mapping };
+  const window = { fromUtcMs: startUtcMs, toUtcMs: startUtcMs + rows * intervalMs };
+  const work = { ...key, channel: channelOf(`file of ${String(rows)}`), storedAt: startUtcMs, mapping, window };
   const limits = { greatestSpan: 0.06, nowUtcMs: startUtcMs + rows * intervalMs };
   const breathe = () => new Promise<void>((resolve) => void setImmediate(resolve));
   const cost = await seconds(async () => {
@@ -127,6 +131,18 @@ async function prepare(database: BenchDatabase): Promise<void> {
   if (!(await insertRun(database.connection.db, row))) throw new Error('the run of the benchmark was refused');
 }
 
+/** What a device's batch of a second costs a channel that holds so many samples already, ms; half of them cost less. */
+async function appendOne({ connection }: BenchDatabase, rows: number): Promise<number> {
+  const { id } = await store.findOrMakeChannel(connection.db, channelOf(`file of ${String(rows)}`));
+  const samples = createSampleStore(connection);
+  const costs: number[] = [];
+  for (let batch = 0; batch < batchesOfADevice; batch += 1) {
+    const utcMs = Float64Array.from({ length: 10 }, (_, index) => startUtcMs + (rows + 10 * batch + index) * intervalMs);
+    costs.push(await seconds(() => samples.append(labId, id, { utcMs, value: utcMs.map(Math.sin) })));
+  }
+  return 1000 * quantile(costs, 0.5);
+}
+
 const greatestMemoryMiB = () => process.resourceUsage().maxRSS / 1024;
 
 async function run(): Promise<void> {
@@ -134,8 +150,9 @@ async function run(): Promise<void> {
   try {
     await withDatabase(async (database) => {
       await prepare(database);
-      await ingest(database, 20_000);
+      await ingest(database, 19_999);
       const points: { size: number; cost: number }[] = [];
+      const appends: typeof points = [];
       for (const rows of sizes) {
         // Before and after, so that the load of a shared machine falls on both alike.
         const before = await copy(database, { rows, folder, name: 'first copy' });
@@ -144,10 +161,14 @@ async function run(): Promise<void> {
         points.push({ size: rows, cost });
         const value = rows / cost;
         report({ name: `ingest ${String(rows)}`, value, unit: 'rows/s', goal: 100_000, want: 'at least', peer });
+        appends.push({ size: rows, cost: await appendOne(database, rows) });
         if (rows === sizes.at(-1))
           report({ name: 'ingest against COPY', value: value / peer, unit: '1', goal: 0.5, want: 'at least', peer: null });
       }
       report({ name: 'ingest growth', value: growth(points), unit: 'exponent', goal: 1.1, want: 'at most', peer: null });
+      for (const { size, cost } of appends)
+        report({ name: `ingest batch of a second after ${String(size)}`, value: cost, unit: 'ms', goal: null, want: 'told', peer: null });
+      report({ name: 'ingest batch growth', value: growth(appends), unit: 'exponent', goal: 0.2, want: 'at most', peer: null });
       report({ name: 'ingest memory', value: greatestMemoryMiB(), unit: 'MiB', goal: 300, want: 'at most', peer: null });
     });
   } finally {

@@ -2,7 +2,8 @@ import type { BuildArchiveInput, FrozenEvaluation } from '@/shared/archive/build
 import type { ChannelSeries } from '@/shared/archive/run-records';
 import { findFrozenEvaluation, type ListedRecord } from '../store/evaluations';
 import { exclusionsInForce } from '../store/exclusions';
-import { channelsOfRun, countSamples, readEvents, readSteps, type RunRecord } from '../store/runs-read';
+import { channelsOfRun, readEvents, readSteps, type RunRecord } from '../store/runs-read';
+import { countSamples } from '../store/sample-summaries';
 import { stepNotesOf } from '../store/step-notes';
 import { isoOf } from './maker';
 import { ProblemError } from './problem-error';

@@ -1,5 +1,6 @@
 import type { ChannelRecord } from '../store/imports';
-import { channelsOfRun, countSamples, type RunRecord } from '../store/runs-read';
+import { channelsOfRun, type RunRecord } from '../store/runs-read';
+import { countSamples } from '../store/sample-summaries';
 import { ProblemError } from './problem-error';
 import { windowOf } from './run-window';
 import type { Services } from './services';

@@ -1,10 +1,10 @@
-import { and, inArray, lte, sql } from 'drizzle-orm';
+import { and, inArray, lte } from 'drizzle-orm';
 import { jobs, passwordResets } from '@/db/schema';
-import { timestampOfUtcMs } from '@/db/schema/columns';
 import type { Database } from './database';
 import { sweepIdempotencyKeys } from './idempotency';
 import { sweepRateLimits } from './rate-limits';
 import { sweepQuestions } from './rig-questions';
+import { settleSamples } from './sample-months';
 import { sweepSessions } from './session-rows';
 
 const minuteMs = 60_000;
@@ -13,9 +13,9 @@ const dayMs = 24 * 3_600_000;
 const keptJobsMs = 30 * dayMs;
 const monthsAhead = 3;
 
-/** What has to be done now and then (at start and each hour): makes partitions ahead, removes what has expired. */
+/** What has to be done now and then (at start and each hour): makes partitions ahead and for what came in without one, removes what has expired. */
 export async function keepHouse(db: Database, nowUtcMs: number): Promise<void> {
-  await db.execute(sql`select make_sample_partitions(${timestampOfUtcMs(nowUtcMs)}::timestamptz, ${monthsAhead})`);
+  await settleSamples(db, { nowUtcMs, monthsAhead });
   await sweepSessions(db, nowUtcMs);
   await sweepIdempotencyKeys(db, nowUtcMs);
   await sweepRateLimits(db, nowUtcMs);

@@ -6,6 +6,7 @@ import { timestampOfUtcMs } from '@/db/schema/columns';
 import type { importMappingSchema, importPreviewSchema } from '@/shared/contracts/data';
 import type { SampleBatch } from '../interfaces/sample-store';
 import { one, type Connection, type Handle } from './database';
+import { makeMonths, monthsOfWindow } from './sample-months';
 import { appendSamples } from './sample-store';
 
 export type ImportRecord = typeof imports.$inferSelect;
@@ -111,7 +112,7 @@ export class UnsuitableChannelError extends Error {
  * @throws UnsuitableChannelError where the channel has another source or unit
  * @throws ConflictingSamplesError where an instant is known with another value
  */
-export function storeImport(
+export async function storeImport(
   connection: Connection,
   work: {
     labId: string;
@@ -119,12 +120,15 @@ export function storeImport(
     channel: WantedChannel;
     storedAt: number;
     mapping: z.infer<typeof importMappingSchema>;
+    /** Where its samples lie most likely: partitions are made there beforehand. */
+    window: { fromUtcMs: number; toUtcMs: number };
     /** What has to be written in the same transaction when all is stored. */
     also?: (handle: Handle, stored: number) => Promise<void>;
   },
   fill: (take: (batch: SampleBatch) => Promise<void>) => Promise<void>,
 ): Promise<{ channel: ChannelRecord; stored: number; known: number }> {
-  const { labId, importId, channel: wanted, also, ...change } = work;
+  const { labId, importId, channel: wanted, also, window, ...change } = work;
+  await makeMonths(connection.db, monthsOfWindow(window));
   return connection.bulk(async (client, handle) => {
     // Two who commit the same import: the second waits here and then finds it stored.
     await handle

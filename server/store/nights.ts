@@ -1,7 +1,7 @@
 import type { MorningNight } from '@/shared/contracts/morning';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import type { Connection } from './database';
-import type { SampleWindow } from './runs-read';
+import { sumsOf, type SampleWindow } from './sample-summaries';
 
 /** What the morning sheet of a run is compared with, and how whole its deflection is. */
 
@@ -68,21 +68,16 @@ export async function rangeAndMeans(
   window: SampleWindow,
   spans: readonly { seq: number; fromUtcMs: number; toUtcMs: number }[],
 ): Promise<{ least: number; greatest: number; means: Map<number, number> } | null> {
-  const own = [window.labId, window.channelId];
-  const { rows: ranges } = await connection.pool.query<{ least: number | null; greatest: number | null }>(
-    'select min(value) as least, max(value) as greatest from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4',
-    [...own, new Date(window.fromUtcMs), new Date(window.toUtcMs)],
-  );
-  const [range] = ranges;
-  if (range?.least == null || range.greatest === null) return null;
-  const { rows } = await connection.pool.query<{ seq: number; mean: number | null }>(
-    `select seq, (select avg(value) from samples where lab_id = $1 and channel_id = $2 and at between since and until) as mean
-     from unnest($3::int[], $4::timestamptz[], $5::timestamptz[]) as span (seq, since, until)`,
-    [...own, spans.map(({ seq }) => seq), spans.map(({ fromUtcMs }) => new Date(fromUtcMs)), spans.map(({ toUtcMs }) => new Date(toUtcMs))],
-  );
+  const [range, ...ofSpans] = await sumsOf(connection, window, [window, ...spans]);
+  if (range === undefined || range.least === null || range.greatest === null) return null;
   return {
     least: range.least,
     greatest: range.greatest,
-    means: new Map(rows.flatMap(({ seq, mean }) => (mean === null ? [] : [[seq, mean]]))),
+    means: new Map(
+      spans.flatMap(({ seq }, index) => {
+        const mean = ofSpans[index]?.mean ?? null;
+        return mean === null ? [] : [[seq, mean]];
+      }),
+    ),
   };
 }

@@ -1,6 +1,5 @@
 import { and, asc, desc, eq, gt, inArray, isNull, lt, notInArray, or } from 'drizzle-orm';
 import { channels, runEvents, runs, runSteps } from '@/db/schema';
-import { isKey, timestampOfUtcMs } from '@/db/schema/columns';
 import type { ChainedEvent, StepRow } from '@/shared/archive/run-records';
 import type { RunState } from '@/shared/contracts/runs';
 import type { ChannelRecord } from './imports';
@@ -135,68 +134,6 @@ export function channelsOfRun(db: Handle, run: { labId: string; id: string; rigI
     .from(channels)
     .where(and(eq(channels.labId, run.labId), run.rehearsal ? own : or(own, ofRig)))
     .orderBy(asc(channels.createdAt), asc(channels.name));
-}
-
-export interface SampleWindow {
-  labId: string;
-  channelId: string;
-  fromUtcMs: number;
-  toUtcMs: number;
-}
-
-/** How many samples a channel has within a window. */
-export async function countSamples(connection: Connection, window: SampleWindow): Promise<number> {
-  if (!isKey(window.labId) || !isKey(window.channelId)) return 0;
-  const result = await connection.pool.query<{ total: string }>(
-    'select count(*) as total from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4',
-    windowParameters(window),
-  );
-  return Number(result.rows[0]?.total ?? 0);
-}
-
-const windowParameters = (window: SampleWindow) => [
-  window.labId,
-  window.channelId,
-  timestampOfUtcMs(window.fromUtcMs),
-  timestampOfUtcMs(window.toUtcMs),
-];
-
-/**
- * The least and the greatest sample of each of `intervals` equal parts of a window, in order of time: what a plot of
- * that many pixel columns can show, peaks included.
- */
-export async function extremesOf(
-  connection: Connection,
-  window: SampleWindow,
-  intervals: number,
-): Promise<{ utcMs: number[]; value: number[] }> {
-  // One pass without a join: freshly stored samples have no statistics yet, and a join would be planned as one of every row with every part.
-  const result = await connection.pool.query<{ least: [number, number]; greatest: [number, number] }>(
-    `with part as (
-       select (extract(epoch from at) * 1000)::double precision as ms, value,
-         coalesce(least($5::int - 1, floor(extract(epoch from at - $3::timestamptz) / nullif(extract(epoch from $4::timestamptz - $3::timestamptz), 0) * $5)::int), 0) as number
-       from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4)
-     select min(array[value, ms]) as least, max(array[value, -ms]) as greatest from part group by number`,
-    [...windowParameters(window), intervals],
-  );
-  const found = result.rows.flatMap(({ least, greatest }) => {
-    const [low, high] = [
-      { ms: least[1], value: least[0] },
-      { ms: -greatest[1], value: greatest[0] },
-    ];
-    return low.ms === high.ms ? [low] : [low, high];
-  });
-  found.sort((one, other) => one.ms - other.ms);
-  return { utcMs: found.map(({ ms }) => ms), value: found.map(({ value }) => value) };
-}
-
-/** The last instant at which a channel has a sample, or null. */
-export async function lastSampleUtcMs(connection: Connection, channel: { labId: string; channelId: string }): Promise<number | null> {
-  const result = await connection.pool.query<{ ms: number | null }>(
-    'select (extract(epoch from max(at)) * 1000)::double precision as ms from samples where lab_id = $1 and channel_id = $2',
-    [channel.labId, channel.channelId],
-  );
-  return result.rows[0]?.ms ?? null;
 }
 
 export interface SampleFlow {

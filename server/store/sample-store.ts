@@ -6,6 +6,8 @@ import { isKey, timestampOfUtcMs } from '@/db/schema/columns';
 import type { SampleBatch, SampleStore } from '../interfaces/sample-store';
 import type { Connection } from './database';
 import { decodeSamples, encodeSamples, microsecondsOf } from './sample-copy';
+import { fullMonths, makeMonths } from './sample-months';
+import { summariseFresh, summariseSamples } from './sample-summaries';
 
 /** From this many samples on COPY is worth its statements. */
 const copyFromCount = 2000;
@@ -18,10 +20,28 @@ export class UnusableBatchError extends Error {
 
 /** Samples in PostgreSQL: the same instant of a channel is stored once, whatever is sent again. */
 export function createSampleStore(connection: Connection): SampleStore {
+  const room = new Room(connection.db);
   return {
-    append: (labId, channelId, batch) => connection.bulk((client) => appendSamples(client, { labId, channelId }, batch)),
+    append: async (labId, channelId, batch) => {
+      if (batch.utcMs.length >= copyFromCount) await room.makeFor(batch.utcMs);
+      return connection.bulk((client) => appendSamples(client, { labId, channelId }, batch));
+    },
     read: (labId, channelId, window) => connection.bulk((client) => readSamples(client, { labId, channelId }, window)),
   };
+}
+
+/** Makes the partitions that many samples need before they come; each is tried once. */
+class Room {
+  private readonly made = new Set<number>();
+
+  constructor(private readonly db: Connection['db']) {}
+
+  async makeFor(utcMs: Float64Array): Promise<void> {
+    if (!utcMs.every(Number.isFinite)) return;
+    const months = fullMonths(utcMs).filter((month) => !this.made.has(month));
+    await makeMonths(this.db, months);
+    for (const month of months) this.made.add(month);
+  }
 }
 
 interface ChannelKey {
@@ -42,7 +62,9 @@ export async function appendSamples(
   await assertChannel(client, channel);
   const count = batch.utcMs.length;
   if (count === 0) return { stored: 0, known: 0 };
-  const stored = count < copyFromCount ? await insertFew(client, channel, batch) : await copyMany(client, channel, batch);
+  if (count >= copyFromCount && (await copyFresh(client, channel, batch))) return { stored: count, known: 0 };
+  const stored = count < copyFromCount ? await insertFew(client, channel, batch) : await copyAside(client, channel, batch);
+  if (stored > 0) await summariseSamples(client, channel, batch.utcMs);
   return { stored, known: count - stored };
 }
 
@@ -56,12 +78,15 @@ function assertUsable({ utcMs, value }: SampleBatch): void {
     );
 }
 
-/** In place of a foreign key: the channel is of this lab and stays there until the transaction ends. */
+/**
+ * In place of a foreign key: the channel is of this lab and stays there until the transaction ends. Who adds to the same channel meanwhile waits, so that
+ * its summaries are made of all that is there.
+ */
 async function assertChannel(client: PoolClient, { labId, channelId }: ChannelKey): Promise<void> {
   const known =
     isKey(labId) &&
     isKey(channelId) &&
-    (await client.query('select 1 from channels where lab_id = $1 and id = $2 for key share', [labId, channelId])).rowCount === 1;
+    (await client.query('select 1 from channels where lab_id = $1 and id = $2 for no key update', [labId, channelId])).rowCount === 1;
   if (!known) throw new UnusableBatchError(`there is no channel ${channelId} in this lab`);
 }
 
@@ -74,10 +99,11 @@ async function insertFew(client: PoolClient, { labId, channelId }: ChannelKey, b
   return result.rowCount ?? 0;
 }
 
-/** Where nothing is known yet COPY goes straight into the table, which is twice as fast as to ask for each row. */
-async function copyMany(client: PoolClient, channel: ChannelKey, batch: SampleBatch): Promise<number> {
-  const fresh = !(await holdsAnyOf(client, channel, batch)) && (await copyStraight(client, channel, batch));
-  return fresh ? batch.utcMs.length : copyAside(client, channel, batch);
+/** Where nothing is known yet COPY goes straight into the table, which is twice as fast as to ask for each row. False, with nothing stored, where something is. */
+async function copyFresh(client: PoolClient, channel: ChannelKey, batch: SampleBatch): Promise<boolean> {
+  if ((await holdsAnyOf(client, channel, batch)) || !(await copyStraight(client, channel, batch))) return false;
+  await summariseFresh(client, channel, batch);
+  return true;
 }
 
 /** Whether the channel has samples between the first and the last instant of the batch. */

@@ -6,7 +6,8 @@ import { FileTooLarge, FileWatch } from '@/server/ingest/receive-file';
 import * as store from '@/server/store/imports';
 import type { Handle } from '@/server/store/database';
 import { findRig } from '@/server/store/rigs';
-import { channelsOfRun, countSamples, extremesOf, findRun, type RunRecord } from '@/server/store/runs-read';
+import { channelsOfRun, findRun, type RunRecord } from '@/server/store/runs-read';
+import { countSamples, extremesOf } from '@/server/store/sample-summaries';
 import { enterAudit } from '../audited';
 import { assertMapping, checkViewOf, readImport } from '../import-steps';
 import { isoOf } from '../maker';
@@ -168,12 +169,13 @@ export const dataRoutes = [
       source: 'import',
       createdAt: nowUtcMs,
     };
+    const window = { fromUtcMs: run.startedAt ?? run.createdAt, toUtcMs: run.endedAt ?? nowUtcMs };
     const also = (handle: Handle, stored: number) =>
       enterAudit(handle, context, { kind: 'run.data-imported', data: { runId: run.id, importId: file.id, channelName, stored } });
     try {
       const done = await store.storeImport(
         services.database,
-        { labId: file.labId, importId: file.id, channel, storedAt: nowUtcMs, mapping, also },
+        { labId: file.labId, importId: file.id, channel, storedAt: nowUtcMs, mapping, window, also },
         async (take) => {
           const reading = await readImport(services, { file, run, mapping }, take);
           if (!reading.ok) throw unreadable(file, reading);
@@ -204,7 +206,11 @@ export const dataRoutes = [
     if (total > query.points)
       return {
         ...view,
-        ...(await extremesOf(services.database, { ...window, labId: run.labId, channelId: channel.id }, Math.floor(query.points / 2))),
+        ...(await extremesOf(
+          services.database,
+          { ...window, labId: run.labId, channelId: channel.id },
+          { cells: Math.floor(query.points / 2), total },
+        )),
       };
     const batch = await services.samples.read(run.labId, channel.id, window);
     return { ...view, utcMs: [...batch.utcMs], value: [...batch.value] };

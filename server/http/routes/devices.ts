@@ -5,7 +5,7 @@ import { MOST_PROBLEMS, readNdjson, type LineProblem, type ReadSamples } from '@
 import * as store from '@/server/store/device-tokens';
 import { channelsOfRig, findOrMakeChannel, type ChannelRecord } from '@/server/store/imports';
 import { findRig } from '@/server/store/rigs';
-import { lastSampleUtcMs } from '@/server/store/runs-read';
+import { lastSampleUtcMs } from '@/server/store/sample-summaries';
 import { audited } from '../audited';
 import { isoOf, isoOrNull } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
