@@ -1,7 +1,7 @@
 import { sql } from 'drizzle-orm';
-import { DatabaseError } from 'pg';
 import { timestampOfUtcMs } from '@/db/schema/columns';
 import type { Database } from './database';
+import { isGivenUp } from './failures';
 
 /** Months of samples that have a partition of their own. Samples of other months lie in the default one, which is to stay small. */
 
@@ -9,7 +9,6 @@ import type { Database } from './database';
 const enoughOfBatch = 1000;
 const enoughOfAll = 10_000;
 const dayMs = 86_400_000;
-const lockNotAvailable = '55P03';
 
 /** First instants (UTC ms) of the months in which at least so many of the instants lie. */
 export function fullMonths(utcMs: Float64Array, enough = enoughOfBatch): number[] {
@@ -57,13 +56,12 @@ async function whileNobodyWaits(
     await db.transaction(async (tx) => {
       await tx.execute(sql`set local lock_timeout = '500ms'`);
       await tx.execute(sql`set local statement_timeout = 0`);
+      // One after the other; only whoever locks a table hears what tables others have made meanwhile.
+      await tx.execute(sql`select pg_advisory_xact_lock(hashtext('make_sample_partitions'))`);
+      await tx.execute(sql`lock table samples in access share mode`);
       await work(tx);
     });
   } catch (error) {
-    if (!isLocked(error)) throw error;
+    if (!isGivenUp(error)) throw error;
   }
 }
-
-const isLocked = (error: unknown): boolean =>
-  (error instanceof DatabaseError && error.code === lockNotAvailable) ||
-  (error instanceof Error && error.cause !== undefined && isLocked(error.cause));

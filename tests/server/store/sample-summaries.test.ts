@@ -2,6 +2,7 @@ import * as fc from 'fast-check';
 import { timestampOfUtcMs } from '@/db/schema/columns';
 import type { SampleBatch } from '@/server/interfaces/sample-store';
 import { topLevel, widthUs } from '@/server/store/sample-levels';
+import { settleSamples } from '@/server/store/sample-months';
 import { createSampleStore } from '@/server/store/sample-store';
 import { countSamples, extremesOf, lastSampleUtcMs, sumsOf } from '@/server/store/sample-summaries';
 import { databaseOfThisFile } from '@/tests/support/database';
@@ -243,4 +244,17 @@ test('a month gets its partition when many samples of it come, and strays of oth
   await own.connection.pool.query('select settle_stray_samples(1)');
   expect(await placesOf()).toEqual(['samples_2026_11', 'samples_2027_03']);
   await expectRight(own);
+});
+
+test('several who make the same months at once, and one while somebody writes strays, do not fail', async () => {
+  const { connection } = await freshChannel();
+  const nowUtcMs = Date.parse('2034-02-01T00:00:00Z');
+  await Promise.all([1, 2, 3].map(() => settleSamples(connection.db, { nowUtcMs, monthsAhead: 3 })));
+  const placeOf = async (name: string) => (await connection.pool.query('select to_regclass($1)::text as place', [name])).rows[0].place;
+  expect(await placeOf('samples_2034_04')).toBe('samples_2034_04');
+  await connection.bulk(async (client) => {
+    await client.query('lock table samples_default in row exclusive mode');
+    await settleSamples(connection.db, { nowUtcMs: Date.parse('2035-02-01T00:00:00Z'), monthsAhead: 1 });
+  });
+  expect(await placeOf('samples_2035_02')).toBeNull();
 });
