@@ -9,6 +9,7 @@ import { liveSourceOf, mayStillRead } from '../http/live/live-source';
 import { lineOf } from '../http/line-view';
 import { AnswerCounts } from '../http/metrics';
 import { Reviews } from '../http/reviews';
+import { StartSeeds } from '../http/start-seeds';
 import type { Services } from '../http/services';
 import { AlarmWatch } from '../http/work/alarm-watch';
 import { workEvaluation } from '../http/work/evaluation-job';
@@ -92,7 +93,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     ...{ clock, log, database, sessions, access, samples, stations, arms, arming, locks, supervisor, guided, soak, live, lines, newToken },
     config: { ...config, limits: { ...config.limits }, devices: { ...config.devices } },
     ...{ newId: randomUUID, sha256: sha256Hex, desk, outlook, post, arrived: told.arrived, runChanged: told.runChanged },
-    ...{ reviews: new Reviews({ clock, newToken }), answers: new AnswerCounts() },
+    ...{ reviews: new Reviews({ clock, newToken }), startSeeds: new StartSeeds({ clock, newId: randomUUID }), answers: new AnswerCounts() },
     appendRates: new AppendRates(clock, () => services.config.devices),
     idempotency: createIdempotency(database.db, nowUtcMs),
     ...buildTelling(parts, () => services.config.port),

@@ -51,7 +51,7 @@ export function assertFreshTap(tappedAt: string | undefined, nowUtcMs: number, a
 function runStartOf(
   { me, membership, services }: Caller,
   begin: Begin,
-  seed: number = seedOf(services.newId()),
+  seed: number,
 ): Omit<RunStart, 'rig' | 'massSetLabel' | 'arm' | 'simulated'> {
   return {
     labId: membership.labId,
@@ -68,9 +68,6 @@ function runStartOf(
     ...(isShuffled(begin.protocol) ? { shuffleSeed: seed } : {}),
   };
 }
-
-/** 32 random bits. */
-const seedOf = (uuid: string): number => Number.parseInt(uuid.slice(0, 8), 16);
 
 /** Checks whose refusal has a code of its own. */
 const codes: Readonly<Record<string, ProblemCode>> = { free: 'rig-busy', lock: 'locked', armed: 'not-armed', cautions: 'not-signed' };
@@ -106,7 +103,7 @@ export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSet
   if (stands !== null) throw stands;
   const arm = services.arms.armOf(begin.rig.id);
   const start: RunStart = {
-    ...runStartOf(caller, begin),
+    ...runStartOf(caller, begin, report.shuffleSeed),
     rig: document,
     massSetLabel: begin.massSet.label,
     simulated: null,
@@ -115,6 +112,7 @@ export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSet
   try {
     services.supervisor.assertMayStart(start);
     const run = await storeStart(caller, start, { begin, massSetId: begin.massSet.id, finishUtcMs: report.finishUtcMs });
+    services.startSeeds.used(run.rigId);
     drive(services, run);
     return run;
   } catch (error) {

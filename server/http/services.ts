@@ -29,6 +29,7 @@ import type { LineHub } from './live/line-hub';
 import type { LiveHub } from './live/live-hub';
 import type { AnswerCounts } from './metrics';
 import type { Reviews } from './reviews';
+import type { StartSeeds } from './start-seeds';
 
 /** Everything a route may use; built once by `server/boot/build-server.ts`. */
 export interface Services {
@@ -73,6 +74,7 @@ export interface Services {
   /** A run changed: all who follow it are told, in this process and in others. */
   runChanged(runId: string, change: LiveChange): void;
   reviews: Reviews;
+  startSeeds: StartSeeds;
   live: LiveHub;
   lines: LineHub;
   tasks: HeavyTasks;

@@ -20,6 +20,7 @@ interface Seen {
   controller: ControllerState | null;
   timeline: Timeline;
   nowUtcMs: number;
+  shuffleSeed: number;
 }
 
 export function rigChecks(services: Services, plan: StartPlan, seen: Seen): StartCheck[] {
@@ -83,12 +84,12 @@ function stillCheck(controller: ControllerState | null): Outcome {
   return controller.moving ? fail('It is moving: wait until it stands still.') : pass('Stands still.');
 }
 
-function protocolCheck({ protocol, document, timeZone }: StartPlan, { controller, nowUtcMs, timeline }: Seen): Outcome {
+function protocolCheck({ protocol, document, timeZone }: StartPlan, { controller, nowUtcMs, timeline, shuffleSeed }: Seen): Outcome {
   const figures = [
     { name: 'steps', value: timeline.items.length, unit: '' as const },
     { name: 'dwells', value: timeline.dwells, unit: '' as const },
   ];
-  const [first, ...others] = checkAtStart({ protocol, rig: document, timeZone }, controller, nowUtcMs);
+  const [first, ...others] = checkAtStart({ protocol, rig: document, timeZone, shuffleSeed }, controller, nowUtcMs);
   if (first === undefined) return pass('Every step can be carried out within the limits of the rig.', ...figures);
   const more = others.length === 0 ? '' : ` (and ${String(others.length)} more)`;
   return fail(`${first.path === null ? '' : `Step ${first.path}: `}${first.message}${more}`, ...figures);

@@ -12,6 +12,8 @@ export interface StartReport {
   durationS: number;
   finishUtcMs: number;
   firstMove: string;
+  /** What the order of shuffled repeats was drawn from: a start that follows begins with it. */
+  shuffleSeed: number;
 }
 
 /** Everything that stands between a rig and a start, each with a sentence and its present figures. */
@@ -19,12 +21,13 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
   const station = services.stations.get(plan.rig.id);
   const controller = station?.link.controller() ?? null;
   const nowUtcMs = services.clock.utcMs();
+  const shuffleSeed = services.startSeeds.of(plan.rig.id);
   const timeline = planTimeline(
-    { protocol: plan.protocol, rig: plan.document, timeZone: plan.timeZone },
+    { protocol: plan.protocol, rig: plan.document, timeZone: plan.timeZone, shuffleSeed },
     { utcMs: nowUtcMs, angleDeg: controller?.angleDeg ?? plan.document.motion?.homeDeg ?? 0 },
   );
   const checks = [
-    ...rigChecks(services, plan, { station, controller, timeline, nowUtcMs }),
+    ...rigChecks(services, plan, { station, controller, timeline, nowUtcMs, shuffleSeed }),
     ...(await labChecks(services, plan, { station, timeline, nowUtcMs })),
   ];
   return {
@@ -33,6 +36,7 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
     durationS: timeline.durationS,
     finishUtcMs: timeline.endUtcMs,
     firstMove: firstMoveOf(timeline),
+    shuffleSeed,
   };
 }
 

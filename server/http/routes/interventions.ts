@@ -71,6 +71,8 @@ const startReviewRoutes = [
     if ((await findRevision(db, { labId: membership.labId, protocolId: body.protocolId }, body.revision)) === null)
       throw notFound('protocol revision');
     if ((await findMassSet(db, { labId: membership.labId, rigId: rig.id }, body.massSetId)) === null) throw notFound('mass set');
+    // Keeps the order that was looked at for as long as the token counts.
+    services.startSeeds.of(rig.id);
     const { token, expiresUtcMs } = services.reviews.issue({ userId: me.userId, rigId: rig.id, subject: startSubject(body) });
     return { token, expiresAt: isoOf(expiresUtcMs), serverAt: isoOf(services.clock.utcMs()) };
   }),

@@ -1,4 +1,5 @@
 import { demoIds, demoPeople } from '@/db/demo/seed';
+import type { Step } from '@/shared/protocol/document';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol } from '@/tests/support/lab-server';
 
@@ -34,6 +35,31 @@ describe('a start', () => {
     await lab.intervene(runId, 'stop').expect(202);
     await lab.until(runId, 'stopped');
   });
+});
+
+test('a run of a shuffled protocol begins with the order that was looked at before the start, and the next run draws anew', async () => {
+  const block = (to: string) =>
+    ({
+      kind: 'repeat',
+      times: 1,
+      steps: [
+        { kind: 'swing', to },
+        { kind: 'dwell', for_s: 20 },
+      ],
+    }) as Step;
+  const blocks: Step = { kind: 'repeat', times: 1, order: 'shuffled', steps: ['near', 'far', 'clear'].map(block) };
+  const protocolId = await lab.issue(quickProtocol({ name: 'Shuffled', steps: [{ kind: 'home' }, blocks] }));
+  await lab.arm();
+  const seeds = lab.services.startSeeds;
+  const query = { protocolId, revision: 1 };
+  await lab.as('operator', 'GET', `/labs/${demoIds.lab}/rigs/${demoIds.rig}/start-checks`).query(query).expect(200);
+  const looked = seeds.of(demoIds.rig);
+  await lab.advance(29_000);
+  const runId = (await lab.askStart(protocolId).expect(201)).body.id as string;
+  expect((await lab.view(runId)).shuffleSeed).toBe(looked);
+  expect(seeds.of(demoIds.rig)).not.toBe(looked);
+  await lab.intervene(runId, 'stop').expect(202);
+  await lab.until(runId, 'stopped');
 });
 
 describe('a resume', () => {
