@@ -13,6 +13,9 @@ export const stepNoteSchema = z.strictObject({
 });
 export type StepNoteView = z.infer<typeof stepNoteSchema>;
 
+/** Rows are numbered in 32 bits. */
+const greatestSeq = 2_147_483_647;
+
 const path = '/labs/:labId/runs/:runId/notes';
 
 export const listStepNotes = defineRoute({
@@ -33,7 +36,7 @@ export const writeStepNote = defineRoute({
   access: 'data.annotate',
   status: 201,
   idempotent: true,
-  body: z.strictObject({ seq: z.number().int().positive(), text: z.string().trim().min(1).max(2000) }),
+  body: z.strictObject({ seq: z.number().int().positive().max(greatestSeq), text: z.string().trim().min(1).max(2000) }),
   response: stepNoteSchema,
   problems: ['invalid-input', 'not-found', 'not-possible-now'],
 });

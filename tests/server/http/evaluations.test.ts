@@ -170,6 +170,7 @@ test('a note to a row of the step log stays with name and time, in the archive t
   expect((await archiveOf(run.id)).has('notes.csv')).toBe(false);
   const writes = (body: object) => lab.as('analyst', 'POST', at).send({ seq: 3, text: 'a lorry, then "quiet"', ...body });
   await writes({ text: ' ' }).expect(400);
+  expect((await writes({ seq: 3_000_000_000 }).expect(400)).body).toMatchObject({ code: 'invalid-input', errors: [{ path: 'seq' }] });
   expect((await writes({ seq: 99 }).expect(404)).body.detail).toMatch(/row of the step log/);
   const { body: note } = await writes({}).expect(201);
   expect(note).toMatchObject({ seq: 3, text: 'a lorry, then "quiet"', by: 'Tam Ferrowdale' });
