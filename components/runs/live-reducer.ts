@@ -151,7 +151,15 @@ function thinned(utcMs: number[], value: number[]): { utcMs: number[]; value: nu
   return { utcMs: utcMs.filter(keep), value: value.filter(keep) };
 }
 
-/** The time that the run keeps to minus the device's, ms; 0 before the first beat. */
-export function serverOffsetMs(state: LiveState): number {
-  return state.offsets.length === 0 ? 0 : Math.max(...state.offsets);
+/** A beat that is ahead of most by more than this was made while the server's clock was being set. */
+const farAheadMs = 5_000;
+
+/**
+ * The time that the run keeps to minus the device's, ms; 0 before the first beat. Beats come late, never early, so the greatest is nearest to the
+ * truth.
+ */
+export function serverOffsetMs({ offsets }: LiveState): number {
+  const sorted = [...offsets].sort((a, b) => a - b);
+  const middle = sorted[Math.floor((sorted.length - 1) / 2)] ?? 0;
+  return sorted.findLast((offset) => offset - middle <= farAheadMs) ?? 0;
 }

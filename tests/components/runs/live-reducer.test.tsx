@@ -166,3 +166,9 @@ describe('how old the newest word is', () => {
     ).toMatchObject({ grade: 'live', silent: null });
   });
 });
+
+test('a single beat that is an hour ahead, made while the clock of the server was being set, does not count', () => {
+  const at = (aheadMs: number): LiveMessage => ({ type: 'beat', data: beatAt(nowUtcMs + aheadMs), receivedAtMs: nowUtcMs });
+  expect(serverOffsetMs(receive(noLive, at(40), at(60), at(3_600_000), at(-9_000)))).toBeCloseTo(60, 0);
+  expect(serverOffsetMs(receive(noLive, at(40), at(3_600_000)))).toBeCloseTo(40, 0);
+});
