@@ -152,7 +152,6 @@ async function run(): Promise<void> {
       await prepare(database);
       await ingest(database, 19_999);
       const points: { size: number; cost: number }[] = [];
-      const appends: typeof points = [];
       for (const rows of sizes) {
         // Before and after, so that the load of a shared machine falls on both alike.
         const before = await copy(database, { rows, folder, name: 'first copy' });
@@ -161,11 +160,14 @@ async function run(): Promise<void> {
         points.push({ size: rows, cost });
         const value = rows / cost;
         report({ name: `ingest ${String(rows)}`, value, unit: 'rows/s', goal: 100_000, want: 'at least', peer });
-        appends.push({ size: rows, cost: await appendOne(database, rows) });
         if (rows === sizes.at(-1))
           report({ name: 'ingest against COPY', value: value / peer, unit: '1', goal: 0.5, want: 'at least', peer: null });
       }
       report({ name: 'ingest growth', value: growth(points), unit: 'exponent', goal: 1.1, want: 'at most', peer: null });
+      // When all is stored: writing out what was copied just before must not be taken for the size of a channel.
+      await database.connection.pool.query('checkpoint');
+      const appends: typeof points = [];
+      for (const size of sizes) appends.push({ size, cost: await appendOne(database, size) });
       for (const { size, cost } of appends)
         report({ name: `ingest batch of a second after ${String(size)}`, value: cost, unit: 'ms', goal: null, want: 'told', peer: null });
       report({ name: 'ingest batch growth', value: growth(appends), unit: 'exponent', goal: 0.2, want: 'at most', peer: null });
