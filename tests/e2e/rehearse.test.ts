@@ -40,7 +40,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     if (await hand.at('evaluate').isVisible()) await hand.taps('evaluate');
     const words = await hand.reads('true-g', /u$/);
     const [, trueG, offPercent, sigmas] =
-      /true G .*is ([\d. ]+) × 10⁻¹¹; found (?:above|below) it by ([\d. ]+) %, ([\d. ]+) u$/.exec(words) ?? [];
+      /true G .*is ([\d. ]+) × 10⁻¹¹ [^;]*; found (?:above|below) it by ([\d. ]+) %, ([\d. ]+) u$/.exec(words) ?? [];
     expect(numberOf(trueG)).toBeCloseTo(6.6743, 4);
     // Two standard uncertainties, and what a night of 12 dwells should reach on this rig.
     expect(numberOf(sigmas)).toBeLessThan(2);
