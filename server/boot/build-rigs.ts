@@ -25,6 +25,7 @@ import { buildStanding, engineItself } from './build-standing';
 import { FileJournals } from './file-journal';
 import { LeaseKeeper, type RigKey } from './lease-keeper';
 import type { MemoryLockKeeper } from './lock-keeper';
+import { ProcessMarks } from './process-marks';
 import { RigApparatus } from './rig-apparatus';
 import { ServerRigStations } from './rig-stations';
 
@@ -74,8 +75,10 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     guided: (): GuidedMoves => guided,
   });
   const clockOf = steadyClocks(clock, (rigId) => supervisor.drives(rigId));
+  const processes = new ProcessMarks(join(parts.config.stateDir, 'processes'));
+  if (parts.config.roles.includes('rig')) processes.leave(wiring.holder, clock.utcMs());
   const leases = new LeaseKeeper({
-    ...{ database, clock, log, onTaken },
+    ...{ database, clock, log, onTaken, processes },
     holder: wiring.holder,
     leaseMs: Math.max(shortestLeaseMs, overrides.paceMs ?? 0),
     graceMs: DATABASE_GRACE_MS,

@@ -1,7 +1,7 @@
 import type { Logger } from 'pino';
 import type { Cancel, Clock } from '../interfaces/clock';
 import type { Connection } from '../store/database';
-import { freeRigs, giveRigLeases, raiseRigEpoch, renewRigLeases, takeRigLease } from '../store/rig-leases';
+import { giveRigLeases, leasesOf, raiseRigEpoch, renewRigLeases, takeRigLease } from '../store/rig-leases';
 
 export interface RigKey {
   labId: string;
@@ -16,6 +16,12 @@ export interface LeaseParts {
   holder: string;
   /** A crashed server's rigs are free again after this, ms. */
   leaseMs: number;
+  /** Which processes are known to have ended, so that their leases need not run out. */
+  processes: {
+    isGone(holder: string): boolean;
+    /** Nothing has to be known of it any more. */
+    forget(holder: string): void;
+  };
   /** A rig for which this process waited is its own now. */
   onTaken(rig: RigKey): void;
   /** Another process has taken a rig over: this one must let go of it at once. */
@@ -32,7 +38,7 @@ const retryMs = 250;
 
 /**
  * Leases of the rigs that this process drives: no rig has two drivers. It waits for those that another process has, each by itself, and
- * takes them over when their lease has run out.
+ * takes them over when their lease has run out, or at once where their process is known to have ended.
  */
 export class LeaseKeeper {
   private readonly epochs = new Map<string, RigKey & { epoch: number }>();
@@ -90,20 +96,27 @@ export class LeaseKeeper {
     const { database, clock, holder } = this.parts;
     this.epochs.clear();
     await giveRigLeases(database.db, { holder, nowUtcMs: clock.utcMs() }).catch(() => undefined);
+    this.parts.processes.forget(holder);
   }
 
-  private async tryTake(rig: RigKey): Promise<boolean> {
+  /** `gone`: the driver that is known to have ended; found out here where it is not given. */
+  private async tryTake(rig: RigKey, gone?: string): Promise<boolean> {
     const { database, clock, holder, leaseMs } = this.parts;
     const { labId, rigId } = rig;
     const nowUtcMs = clock.utcMs();
-    const epoch = await takeRigLease(database.db, { labId, rigId, holder, nowUtcMs, untilUtcMs: nowUtcMs + leaseMs });
+    const lease = { labId, rigId, holder, nowUtcMs, untilUtcMs: nowUtcMs + leaseMs };
+    const epoch = await takeRigLease(database.db, { ...lease, gone: gone ?? null });
+    if (epoch === null && gone === undefined) {
+      const [other] = await leasesOf(database.db, [rigId]);
+      return other !== undefined && this.parts.processes.isGone(other.holder) && this.tryTake(rig, other.holder);
+    }
     if (epoch === null || this.closed) return false;
     this.epochs.set(rigId, { labId, rigId, epoch });
     return true;
   }
 
   private waitFor({ labId, rigId }: RigKey): void {
-    this.parts.log.warn({ rigId }, 'another server drives the rig; this one takes it over when its lease has run out');
+    this.parts.log.warn({ rigId }, 'another server drives the rig; this one takes it over when it ends or its lease has run out');
     this.waitedFor.set(rigId, { labId, rigId });
     this.retryRegularly();
   }
@@ -121,14 +134,13 @@ export class LeaseKeeper {
   private async retry(): Promise<void> {
     const { database, clock, log } = this.parts;
     try {
-      const free = await freeRigs(database.db, [...this.waitedFor.keys()], clock.utcMs());
-      for (const rig of [...this.waitedFor.values()]) {
-        if (!free.has(rig.rigId) || !(await this.tryTake(rig))) continue;
-        this.waitedFor.delete(rig.rigId);
-        log.warn(
-          { rigId: rig.rigId, epoch: this.epochs.get(rig.rigId)?.epoch },
-          'the lease of the other server has run out; this one takes the rig over',
-        );
+      const nowUtcMs = clock.utcMs();
+      for (const { rigId, holder, untilUtcMs } of await leasesOf(database.db, [...this.waitedFor.keys()])) {
+        const rig = this.waitedFor.get(rigId);
+        const gone = untilUtcMs > nowUtcMs && this.parts.processes.isGone(holder) ? holder : undefined;
+        if (rig === undefined || (untilUtcMs > nowUtcMs && gone === undefined) || !(await this.tryTake(rig, gone))) continue;
+        this.waitedFor.delete(rigId);
+        log.warn({ rigId, epoch: this.epochs.get(rigId)?.epoch }, `the other server ${gone === undefined ? 'let its lease run out' : 'has ended'}; this one takes the rig over`);
         this.parts.onTaken(rig);
       }
     } catch (error) {

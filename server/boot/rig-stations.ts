@@ -176,10 +176,7 @@ export class ServerRigStations implements RigStations {
             ...batch,
           });
       },
-      {
-        positionKnown: () => station.link.controller()?.positionKnown ?? true,
-        onError: (error) => log.error({ err: error, rigId: station.rigId }, 'the simulated balance failed'),
-      },
+      (error) => log.error({ err: error, rigId: station.rigId }, 'the simulated balance failed'),
     );
   }
 }

@@ -6,7 +6,7 @@ import type { ByteLineFactory } from '../interfaces/byte-line';
 import type { Cancel, Clock } from '../interfaces/clock';
 import type { VirtualInputs } from '../interfaces/rig-stations';
 import type { SampleBatch } from '../interfaces/sample-store';
-import { createSimulatedController, type SimulatedController } from '../links/simulated-controller';
+import { createSimulatedController, type LightController, type SimulatedController } from '../links/simulated-controller';
 import type { ApparatusMemory, ApparatusState } from './apparatus-memory';
 
 export interface ApparatusParts {
@@ -15,7 +15,7 @@ export interface ApparatusParts {
   document: RigDocument & { motion: RigMotion };
   /** Of the noise and of the controller's boot; another one at each first start. */
   seed: number;
-  /** Null: nothing is remembered over a restart. */
+  /** Null: nothing is remembered over a restart. A controller that lives longer keeps itself. */
   memory: ApparatusMemory | null;
   /** A controller that lives longer than this server; absent: one of its own. */
   controller?: SimulatedController;
@@ -26,6 +26,7 @@ export const simulatedRateHz = 10;
 /** A simulated rig: the turntable's controller and the pendulum that its true angle drives, also between runs. */
 export class SimulatedApparatus {
   readonly controller: SimulatedController;
+  private readonly own: LightController | null;
   private balance: SimulatedBalance;
   private readonly born: { seed: number; uptimeS: number; atUtcMs: number };
   private sources: string;
@@ -34,15 +35,13 @@ export class SimulatedApparatus {
     const { clock, document, seed, memory, rigId } = parts;
     const before = memory?.load(rigId) ?? null;
     this.born = bornFrom(before, seed, clock.utcMs());
-    this.controller =
-      parts.controller ??
-      createSimulatedController({
-        clock,
-        rig: document.motion,
-        seed: this.born.seed,
-        uptimeS: this.born.uptimeS,
-        ...(before === null ? {} : { startDeg: within(document.motion, before.angleDeg), homed: before.positionKnown }),
-      });
+    const place = before === null ? {} : { startDeg: within(document.motion, before.angleDeg), homed: before.positionKnown };
+    const { seed: bootSeed, uptimeS } = this.born;
+    this.own =
+      parts.controller === undefined
+        ? createSimulatedController({ clock, rig: document.motion, seed: bootSeed, uptimeS, ...place })
+        : null;
+    this.controller = parts.controller ?? (this.own as LightController);
     this.sources = JSON.stringify(document.sources);
     this.balance = this.newBalance(document);
   }
@@ -69,7 +68,7 @@ export class SimulatedApparatus {
   }
 
   /** Hands over what the readout has seen, once a second, until the returned function is called. */
-  flow(take: (batch: SampleBatch) => void, told: { positionKnown: () => boolean; onError: (error: unknown) => void }): Cancel {
+  flow(take: (batch: SampleBatch) => void, onError: (error: unknown) => void): Cancel {
     const { clock } = this.parts;
     const feed = feedSimulatedBalance({
       clock,
@@ -77,19 +76,20 @@ export class SimulatedApparatus {
       angleDegAt: this.controller.trueAngleDegAt,
       sink: (batch) => {
         take(batch);
-        this.remember(told.positionKnown());
+        this.remember();
       },
-      onError: told.onError,
+      onError,
     });
     return () => feed.stop();
   }
 
-  private remember(positionKnown: boolean): void {
+  /** A table that moves is remembered where it would come to rest without this server, as a real one would. */
+  private remember(): void {
     const { memory, clock, rigId } = this.parts;
-    if (memory === null) return;
+    if (memory === null || this.own === null) return;
     const atUtcMs = clock.utcMs();
     const uptimeS = this.born.uptimeS + (atUtcMs - this.born.atUtcMs) / 1000;
-    memory.save(rigId, { seed: this.born.seed, uptimeS, atUtcMs, angleDeg: this.controller.trueAngleDegAt(atUtcMs), positionKnown });
+    memory.save(rigId, { seed: this.born.seed, uptimeS, atUtcMs, ...this.own.ifLeft() });
   }
 
   private newBalance(document: RigDocument): SimulatedBalance {

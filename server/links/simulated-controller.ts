@@ -57,6 +57,11 @@ export interface SimulatedController {
   slip(steps: number): void;
 }
 
+export interface LightController extends SimulatedController {
+  /** Where the table comes to rest (deg) if nobody speaks to the controller any more, and whether it knows that place. */
+  ifLeft(): { angleDeg: number; positionKnown: boolean };
+}
+
 const DEFAULT_RATE_PPM = 18;
 const DEFAULT_UPTIME_S = 4321.5;
 const US_PER_MS = 1000;
@@ -80,7 +85,7 @@ function settingOf({ rig, seed = 1, ...options }: SimulatedControllerOptions): M
  * The light simulated controller: the machine of SPEC.md on an injected clock, behind the same bytes as a real one.
  * Its own clock has an offset (it has been on for a while) and a rate error, as a crystal has.
  */
-export function createSimulatedController(options: SimulatedControllerOptions): SimulatedController {
+export function createSimulatedController(options: SimulatedControllerOptions): LightController {
   const { clock, rig, seed = 1 } = options;
   const bornMs = clock.monotonicMs();
   const usPerMs = US_PER_MS * (1 + (options.ratePpm ?? DEFAULT_RATE_PPM) * 1e-6);
@@ -126,6 +131,10 @@ export function createSimulatedController(options: SimulatedControllerOptions): 
   return {
     factory: line.factory,
     trueAngleDegAt: (utcMs) => degOfSteps(rig, machine.motion.tableAt(usAt(clock.monotonicMs() + (utcMs - clock.utcMs())))),
+    ifLeft: () => {
+      const { steps, known } = machine.ifLeft(usAt(clock.monotonicMs()));
+      return { angleDeg: degOfSteps(rig, steps), positionKnown: known };
+    },
     openInterlock: () => act((us) => machine.setInput('interlock', false, us)),
     closeInterlock: () => act((us) => machine.setInput('interlock', true, us)),
     loseSupply: () => act((us) => machine.setInput('supply', false, us)),

@@ -66,6 +66,11 @@ export class SimulatedMachine {
     this.voice.ring.note({ word: 'boot', cause: 'power' }, 0);
   }
 
+  /** What a restart of everything else would find: where the table comes to rest by itself, and whether it is counted. */
+  ifLeft(us: number): { steps: number; known: boolean } {
+    return { steps: this.motion.restIfLeft(us, this.leaseUntilUs), known: this.motion.known };
+  }
+
   /** When something happens next without anything arriving. */
   nextDueUs(): number {
     return this.start.doneUs ?? Math.min(this.motion.nextDueUs(), this.leaseDueUs());

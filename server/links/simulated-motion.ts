@@ -149,6 +149,17 @@ export class SimulatedMotion {
     return this.play.tableAt(us, this.track.at(us).position);
   }
 
+  /** Where the table comes to rest if nothing is ordered any more and the lease ends at `leaseUntilUs`, microsteps from the home edge. */
+  restIfLeft(us: number, leaseUntilUs: number): number {
+    const { active } = this;
+    if (active === null || active.leg.length === 0) return this.tableAt(us);
+    const endUs = active.leg.at(-1)?.toUs ?? us;
+    const lapseUs = Math.max(us, leaseUntilUs);
+    if (active.state === 'braking' || endUs <= lapseUs) return this.tableAt(endUs);
+    const at = this.track.at(lapseUs);
+    return this.play.tableAt(lapseUs, brakeStretches(at, active.acceleration, lapseUs).at(-1)?.to ?? at.position);
+  }
+
   private steps(us: number): number {
     const { position, speed } = this.track.at(us);
     return speed < 0 ? Math.ceil(position - TINY_STEPS) + 0 : Math.floor(position + TINY_STEPS);

@@ -4,22 +4,23 @@ import type { Handle } from './database';
 
 /**
  * Takes or renews the lease of a rig: exactly one process drives it. A new holder gets a higher epoch, which travels to
- * the controller as a fence; the same holder keeps its epoch.
+ * the controller as a fence; the same holder keeps its epoch. `gone`: a holder that is known to have ended, whose lease need not run out.
  * @returns the epoch, or null while somebody else's lease runs
  */
 export async function takeRigLease(
   db: Handle,
-  lease: { labId: string; rigId: string; holder: string; nowUtcMs: number; untilUtcMs: number },
+  lease: { labId: string; rigId: string; holder: string; nowUtcMs: number; untilUtcMs: number; gone?: string | null },
 ): Promise<number | null> {
-  const { labId, rigId, holder, nowUtcMs, untilUtcMs } = lease;
+  const { labId, rigId, holder, nowUtcMs, untilUtcMs, gone = null } = lease;
   const mine = eq(rigLeases.holder, holder);
+  const ended = gone === null ? undefined : eq(rigLeases.holder, gone);
   const rows = await db
     .insert(rigLeases)
     .values({ labId, rigId, holder, epoch: 1, untilAt: untilUtcMs })
     .onConflictDoUpdate({
       target: [rigLeases.labId, rigLeases.rigId],
       set: { holder, untilAt: untilUtcMs, epoch: sql`case when ${mine} then ${rigLeases.epoch} else ${rigLeases.epoch} + 1 end` },
-      setWhere: or(mine, lte(rigLeases.untilAt, nowUtcMs)),
+      setWhere: or(mine, lte(rigLeases.untilAt, nowUtcMs), ended),
     })
     .returning({ epoch: rigLeases.epoch });
   return rows[0]?.epoch ?? null;
@@ -52,13 +53,12 @@ export async function renewRigLeases(db: Handle, lease: { holder: string; untilU
   return new Set(rows.map(({ rigId }) => rigId));
 }
 
-/** Those of these rigs whose lease has run out. */
-export async function freeRigs(db: Handle, rigIds: readonly string[], nowUtcMs: number): Promise<ReadonlySet<string>> {
-  const rows = await db
-    .select({ rigId: rigLeases.rigId })
+/** Who has these rigs, and until when. */
+export function leasesOf(db: Handle, rigIds: readonly string[]): Promise<{ rigId: string; holder: string; untilUtcMs: number }[]> {
+  return db
+    .select({ rigId: rigLeases.rigId, holder: rigLeases.holder, untilUtcMs: rigLeases.untilAt })
     .from(rigLeases)
-    .where(and(inArray(rigLeases.rigId, [...rigIds]), lte(rigLeases.untilAt, nowUtcMs)));
-  return new Set(rows.map(({ rigId }) => rigId));
+    .where(inArray(rigLeases.rigId, [...rigIds]));
 }
 
 /** Rigs that some process drives now. */

@@ -30,10 +30,13 @@ function countQuestions(): void {
   Object.assign(pool, { query: counted });
 }
 let clock = new VirtualClock(startUtcMs, settle);
+/** Processes that are known to have ended. */
+const gone = new Set<string>();
+const processes = { isGone: (holder: string) => gone.has(holder), forget: (holder: string) => void gone.delete(holder) };
 
 function keeper(holder: string, more: Partial<LeaseParts> = {}): LeaseKeeper {
   return new LeaseKeeper({
-    ...{ database: database().connection, clock, log: pino({ level: 'silent' }), holder, leaseMs, graceMs: 4_000 },
+    ...{ database: database().connection, clock, log: pino({ level: 'silent' }), holder, leaseMs, processes, graceMs: 4_000 },
     ...{ onTaken: () => undefined, onLost: () => undefined, onDatabase: () => undefined },
     ...more,
   });
@@ -86,6 +89,25 @@ test('a rig whose driver is gone is taken over when its lease has run out, with 
   expect(first.holds(demoIds.rig)).toBe(false);
   await first.close();
   await second.close();
+});
+
+test('the rigs of a process that is known to have ended are taken over at once, by one that waits and by one that comes', async () => {
+  clock = new VirtualClock(startUtcMs + 5_400_000, settle);
+  const taken: number[] = [];
+  const first = keeper('killed');
+  const waiting = keeper('waiting', { onTaken: () => taken.push(clock.monotonicMs()) });
+  const epoch = (await first.epochOf(rig)) as number;
+  expect(await waiting.epochOf(rig)).toBeNull();
+  const killedMs = clock.monotonicMs();
+  gone.add('killed');
+  await clock.advance(leaseMs / 2);
+  // With the next look at it, which is four times a second.
+  expect((taken[0] ?? Infinity) - killedMs).toBeLessThanOrEqual(250);
+  expect(await waiting.epochOf(rig)).toBe(epoch + 1);
+  gone.add('waiting');
+  const next = keeper('next');
+  expect(await next.epochOf(rig)).toBe(epoch + 2);
+  await next.close();
 });
 
 test('a database that does not answer for more than 4 s is told of, with the beginning, and so is its return', async () => {

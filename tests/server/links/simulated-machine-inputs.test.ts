@@ -4,6 +4,20 @@ import { MachinePeer } from './machine-peer';
 const code = (reply: { body: unknown }) => (reply.body as { code?: string }).code ?? 'ok';
 
 describe('lease, inputs and warning (SPEC 10, 11)', () => {
+  test.each([0, 300, 900, 1_700, 2_400, 3_900, 5_000, 5_600, 6_500])(
+    'where the table comes to rest if it is left after %d ms is told before',
+    (leftAtMs) => {
+      const peer = new MachinePeer({ backlashSteps: 3 }).greet();
+      peer.ask(peer.move(-1_600));
+      peer.passRenewing(leftAtMs);
+      const { steps, known } = peer.machine.ifLeft(peer.us);
+      peer.pass(10_000);
+      expect(peer.machine.motion.state).toBe('rest');
+      expect(steps).toBeCloseTo(peer.machine.motion.tableAt(peer.us), 6);
+      expect(known).toBe(true);
+    },
+  );
+
   test('a lease that lapses in motion ends it with a ramp; the lease lapses at 2.0 s', () => {
     const peer = new MachinePeer().greet();
     peer.ask({ ...peer.move(1_600), speed: 200_000 } as ReturnType<MachinePeer['move']>);

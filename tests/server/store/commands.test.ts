@@ -1,7 +1,7 @@
 import { armRig, currentArm, endArm } from '@/server/store/arms';
 import { createIdempotency, sweepIdempotencyKeys } from '@/server/store/idempotency';
 import { countUse, forgetUses, sweepRateLimits } from '@/server/store/rate-limits';
-import { freeRigs, giveRigLeases, renewRigLeases, takeRigLease } from '@/server/store/rig-leases';
+import { giveRigLeases, leasesOf, renewRigLeases, takeRigLease } from '@/server/store/rig-leases';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { eveningUtcMs, makeLab, makeRig, makeUser } from './rows';
 
@@ -141,11 +141,14 @@ describe('rig leases', () => {
     expect(await take('b', 9999)).toBe(2);
     expect(await take('a', 10_000)).toBeNull();
     await giveRigLeases(db(), { holder: 'b', nowUtcMs: eveningUtcMs + 10_000 });
-    expect(await freeRigs(db(), [rigId], eveningUtcMs + 9_999)).toEqual(new Set());
-    expect(await freeRigs(db(), [rigId], eveningUtcMs + 10_000)).toEqual(new Set([rigId]));
+    expect(await leasesOf(db(), [rigId])).toEqual([{ rigId, holder: 'b', untilUtcMs: eveningUtcMs + 10_000 }]);
     expect(await take('a', 10_000)).toBe(3);
     expect(await renewRigLeases(db(), { holder: 'a', untilUtcMs: eveningUtcMs + 20_000 })).toEqual(new Set([rigId]));
     expect(await renewRigLeases(db(), { holder: 'b', untilUtcMs: eveningUtcMs + 30_000 })).toEqual(new Set());
     expect(await take('b', 19_999)).toBeNull();
+    const evening = { labId: lab.id, rigId, nowUtcMs: eveningUtcMs + 19_999, untilUtcMs: eveningUtcMs + 25_000 };
+    expect(await takeRigLease(db(), { ...evening, holder: 'c', gone: 'b' })).toBeNull();
+    expect(await takeRigLease(db(), { ...evening, holder: 'c', gone: 'a' })).toBe(4);
+    expect(await takeRigLease(db(), { ...evening, holder: 'b', gone: 'a' })).toBeNull();
   });
 });
