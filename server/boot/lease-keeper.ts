@@ -140,7 +140,10 @@ export class LeaseKeeper {
         const gone = untilUtcMs > nowUtcMs && this.parts.processes.isGone(holder) ? holder : undefined;
         if (rig === undefined || (untilUtcMs > nowUtcMs && gone === undefined) || !(await this.tryTake(rig, gone))) continue;
         this.waitedFor.delete(rigId);
-        log.warn({ rigId, epoch: this.epochs.get(rigId)?.epoch }, `the other server ${gone === undefined ? 'let its lease run out' : 'has ended'}; this one takes the rig over`);
+        log.warn(
+          { rigId, epoch: this.epochs.get(rigId)?.epoch },
+          `the other server ${gone === undefined ? 'let its lease run out' : 'has ended'}; this one takes the rig over`,
+        );
         this.parts.onTaken(rig);
       }
     } catch (error) {

@@ -38,9 +38,7 @@ export class SimulatedApparatus {
     const place = before === null ? {} : { startDeg: within(document.motion, before.angleDeg), homed: before.positionKnown };
     const { seed: bootSeed, uptimeS } = this.born;
     this.own =
-      parts.controller === undefined
-        ? createSimulatedController({ clock, rig: document.motion, seed: bootSeed, uptimeS, ...place })
-        : null;
+      parts.controller === undefined ? createSimulatedController({ clock, rig: document.motion, seed: bootSeed, uptimeS, ...place }) : null;
     this.controller = parts.controller ?? (this.own as LightController);
     this.sources = JSON.stringify(document.sources);
     this.balance = this.newBalance(document);

@@ -81,6 +81,11 @@ function settingOf({ rig, seed = 1, ...options }: SimulatedControllerOptions): M
   };
 }
 
+function placeIfLeft(machine: SimulatedMachine, rig: RigMotion, us: number): { angleDeg: number; positionKnown: boolean } {
+  const { steps, known } = machine.ifLeft(us);
+  return { angleDeg: degOfSteps(rig, steps), positionKnown: known };
+}
+
 /**
  * The light simulated controller: the machine of SPEC.md on an injected clock, behind the same bytes as a real one.
  * Its own clock has an offset (it has been on for a while) and a rate error, as a crystal has.
@@ -131,10 +136,7 @@ export function createSimulatedController(options: SimulatedControllerOptions): 
   return {
     factory: line.factory,
     trueAngleDegAt: (utcMs) => degOfSteps(rig, machine.motion.tableAt(usAt(clock.monotonicMs() + (utcMs - clock.utcMs())))),
-    ifLeft: () => {
-      const { steps, known } = machine.ifLeft(usAt(clock.monotonicMs()));
-      return { angleDeg: degOfSteps(rig, steps), positionKnown: known };
-    },
+    ifLeft: () => placeIfLeft(machine, rig, usAt(clock.monotonicMs())),
     openInterlock: () => act((us) => machine.setInput('interlock', false, us)),
     closeInterlock: () => act((us) => machine.setInput('interlock', true, us)),
     loseSupply: () => act((us) => machine.setInput('supply', false, us)),
@@ -146,10 +148,6 @@ export function createSimulatedController(options: SimulatedControllerOptions): 
     freeze: (ms) => line.freeze(ms),
     unplug: () => line.setMissing(true),
     plug: () => line.setMissing(false),
-    slip: (steps) =>
-      act((us) => {
-        machine.runTo(us);
-        machine.motion.slip(steps, us);
-      }),
+    slip: (steps) => act((us) => (machine.runTo(us), machine.motion.slip(steps, us))),
   };
 }
