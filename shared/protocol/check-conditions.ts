@@ -4,7 +4,7 @@ import type { ProtocolDocument, Step } from './document';
 import type { Finding } from './finding';
 import { sideAt } from './stations';
 import { walkSteps } from './step-path';
-import { planTimeline } from './timeline';
+import { planTimeline, type TimelineItem } from './timeline';
 import { isCalm, waitOf } from './wait';
 
 /** A window has to hold so large a part of a period for the swing to be told from the drift. */
@@ -46,23 +46,44 @@ function waitFindings(step: Step, path: string, rig: RigDocument): Finding[] {
   return findings;
 }
 
+type Side = 'near' | 'far' | null;
+
+/** What is met on the way, and where it stands in the plan and in the document. */
+type Met = Pick<TimelineItem, 'path' | 'documentPath'>;
+
+/** A repeat that is shuffled. */
+interface Shuffled {
+  /** In the document, with the point that follows: `2.repeat.` */
+  prefix: string;
+  /** Where each child that moves the sources leaves them, by its place. */
+  ends: ReadonlyMap<string, Side>;
+}
+
 /**
- * A proof compares the last near and the last far dwell before it: where it is met first, both must have been. Within a repeat that is shuffled
- * the other children may all come after it.
+ * A proof compares the last near and the last far dwell before it: where it is met first, both must have been, in whatever order the children
+ * of a shuffled repeat come.
  */
 function proofFindings(document: ProtocolDocument, rig: RigDocument): Finding[] {
   if (![...walkSteps(document.steps)].some(({ step }) => step.kind === 'proof')) return [];
   const { items } = planTimeline({ protocol: document, rig, timeZone: 'UTC' }, { utcMs: 0, angleDeg: rig.motion?.homeDeg ?? 0 });
-  const shuffled = [...walkSteps(document.steps)].flatMap(({ step, path }) =>
-    step.kind === 'repeat' && step.order === 'shuffled' ? [`${path}.`] : [],
-  );
-  const before: { documentPath: string; side: 'near' | 'far' | null }[] = [];
+  const moves = items.filter(({ kind }) => kind === 'swing' || kind === 'home');
+  const shuffled = [...walkSteps(document.steps)].flatMap(({ step, path }): Shuffled[] => {
+    if (step.kind !== 'repeat' || step.order !== 'shuffled') return [];
+    const prefix = `${path}.`;
+    const own = moves.filter(({ documentPath }) => documentPath.startsWith(prefix));
+    return [{ prefix, ends: new Map(own.map((move) => [childOf(move.documentPath, prefix), sideAt(rig, move.angleToDeg)])) }];
+  });
+  const before: (Met & { side: Side })[] = [];
   const refused = new Set<string>();
-  for (const { kind, documentPath, angleToDeg } of items) {
-    if (kind === 'dwell') before.push({ documentPath, side: sideAt(rig, angleToDeg) });
-    if (kind !== 'proof') continue;
-    const sure = before.filter((dwell) => shuffled.every((repeat) => isSurelyBefore(dwell.documentPath, { documentPath, repeat })));
-    if (!sure.some(({ side }) => side === 'near') || !sure.some(({ side }) => side === 'far')) refused.add(documentPath);
+  let move: Met | null = null;
+  for (const item of items) {
+    if (item.kind === 'swing' || item.kind === 'home') move = item;
+    const broughtBy = move;
+    if (item.kind === 'dwell' && shuffled.every((repeat) => isSideSure(item, broughtBy, repeat)))
+      before.push({ ...item, side: sideAt(rig, item.angleToDeg) });
+    if (item.kind !== 'proof') continue;
+    const sure = before.filter((dwell) => shuffled.every((repeat) => isSurelyBefore(dwell, item, repeat)));
+    if (!sure.some(({ side }) => side === 'near') || !sure.some(({ side }) => side === 'far')) refused.add(item.documentPath);
   }
   return [...refused].map((path) => ({
     code: 'proof-needs-pair',
@@ -72,9 +93,18 @@ function proofFindings(document: ProtocolDocument, rig: RigDocument): Finding[] 
   }));
 }
 
-/** Not in another child of the shuffled repeat that the proof stands in. */
-function isSurelyBefore(dwellPath: string, { documentPath, repeat }: { documentPath: string; repeat: string }): boolean {
-  if (!documentPath.startsWith(repeat) || !dwellPath.startsWith(repeat)) return true;
-  const childOf = (path: string) => path.slice(repeat.length).split('.', 1)[0];
-  return childOf(dwellPath) === childOf(documentPath);
+/** Whether the sources stand there in every order: a child that does not move them finds them where another has left them. */
+function isSideSure(dwell: Met, broughtBy: Met | null, { prefix, ends }: Shuffled): boolean {
+  if (dwell.documentPath.startsWith(prefix))
+    return ends.size === 0 || (broughtBy !== null && childOf(broughtBy.path, prefix) === childOf(dwell.path, prefix));
+  return broughtBy?.documentPath.startsWith(prefix) !== true || new Set(ends.values()).size === 1;
 }
+
+/** Not in another child of the shuffled repeat that the proof stands in. */
+function isSurelyBefore(dwell: Met, proof: Met, { prefix }: Shuffled): boolean {
+  if (!proof.documentPath.startsWith(prefix) || !dwell.documentPath.startsWith(prefix)) return true;
+  return childOf(dwell.documentPath, prefix) === childOf(proof.documentPath, prefix);
+}
+
+/** `2.repeat.1` of `2.repeat.1.repeat.3.dwell`, and `2.repeat[4].1` of the same in a plan, for the repeat `2.repeat.` */
+const childOf = (path: string, prefix: string): string => path.split('.').slice(0, prefix.split('.').length).join('.');

@@ -5,6 +5,7 @@ import type { Finding } from './finding';
 import { homingObstacle } from './homing';
 import { degrees, pathObstacles } from './motion-path';
 import { greatestPosition, rotationRefusals } from './rotation';
+import { MOST_SHUFFLED, shuffledChildren } from './shuffle';
 import { resolveTarget, sideAt } from './stations';
 import { partsDurationS, partsOf, type StepPart } from './step-parts';
 
@@ -91,7 +92,8 @@ function afterRepeat(
   before: Situation[],
   { walk, path }: { walk: Walk; path: string },
 ): Situation[] {
-  if (step.order === 'shuffled') return afterShuffled(step, before, { walk, path });
+  // One of more children is refused for their number.
+  if (step.order === 'shuffled' && shuffledChildren(step) <= MOST_SHUFFLED) return afterShuffled(step, before, { walk, path });
   const inside = { walk, prefix: `${path}.` };
   const once = afterList(step.steps, before, inside);
   if (step.times === 1) return once;
@@ -105,12 +107,17 @@ function afterShuffled(
   before: Situation[],
   { walk, path }: { walk: Walk; path: string },
 ): Situation[] {
-  let from = different(before);
+  let left: Situation[][] = step.steps.map(() => []);
   for (;;) {
-    const after = step.steps.flatMap((child, index) => afterStepAt(child, from, { walk, path: `${path}.${index + 1}.${child.kind}` }));
-    const all = different([...from, ...after]);
-    if (all.length === from.length) return different(step.times === undefined ? all : after);
-    from = all;
+    const after = step.steps.map((child, index) => {
+      // In a single pass no child follows itself.
+      const others = left.filter((_, other) => step.times !== 1 || other !== index);
+      const from = different([...before, ...others.flat()]);
+      return different(afterStepAt(child, from, { walk, path: `${path}.${index + 1}.${child.kind}` }));
+    });
+    if (after.flat().length === left.flat().length)
+      return different(step.times === undefined ? [...before, ...after.flat()] : after.flat());
+    left = after;
   }
 }
 

@@ -3,6 +3,7 @@ import { greatestStepCount } from './cursor';
 import type { ProtocolDocument, RepeatStep, Step } from './document';
 import type { Finding } from './finding';
 import { leastPlan } from './least-plan';
+import { MOST_SHUFFLED, shuffledChildren } from './shuffle';
 import { walkSteps } from './step-path';
 
 /** Repeats nest at most this deep. */
@@ -44,6 +45,13 @@ function repeatFindings(step: RepeatStep, path: string, depth: number): Finding[
       code: 'shuffle-needs-repeats',
       path,
       message: `The order "shuffled" takes repeats alone, so that what belongs together stays together, and step ${path}.${loose + 1}.${step.steps[loose]?.kind ?? ''} is none. Put it into a repeat of 1 time, or leave the order as written.`,
+    });
+  const children = step.order === 'shuffled' ? shuffledChildren(step) : 0;
+  if (children > MOST_SHUFFLED)
+    findings.push({
+      code: 'too-many-children',
+      path,
+      message: `The order "shuffled" takes up to ${MOST_SHUFFLED} repeats, those of shuffled repeats inside it counted too, and these are ${children}. Take some of them together into one repeat.`,
     });
   const byU = step.until !== undefined && 'relativeStatisticalU' in step.until;
   const needsAtMost = step.counting === 'good' || byU;

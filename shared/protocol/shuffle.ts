@@ -27,6 +27,16 @@ export interface PassOrder {
 export const isShuffled = (document: Pick<ProtocolDocument, 'steps'>): boolean =>
   [...walkSteps(document.steps)].some(({ step }) => step.kind === 'repeat' && step.order === 'shuffled');
 
+/** So many children a shuffled repeat may have: what each could leave is looked at before each of the others. */
+export const MOST_SHUFFLED = 24;
+
+/** How many children's orders are drawn in a pass, those of shuffled repeats inside it counted too. */
+export const shuffledChildren = ({ steps }: Pick<RepeatStep, 'steps'>): number =>
+  [...walkSteps(steps)].reduce(
+    (count, { step }) => (step.kind === 'repeat' && step.order === 'shuffled' ? count + step.steps.length : count),
+    steps.length,
+  );
+
 /** Number in the document, from 1, of the step that comes at a place, from 0. */
 export const numberAt = ({ order }: OrderedSteps, place: number): number => (order?.[place] ?? place) + 1;
 

@@ -137,4 +137,39 @@ describe('what is refused', () => {
     expect(check([home, ...pair, shuffled(1, once(...pair), once(proof))])).toEqual([]);
     expect(check([home, shuffled(1, once(...pair, proof), once(far, dwell))])).toEqual([]);
   });
+
+  test('a proof whose pair stands on the same side in some order, because a child finds the sources where another has left them', () => {
+    const proof: Step = { kind: 'proof' };
+    const swings = (...blocks: RepeatStep[]) => check([home, near, dwell, shuffled(1, ...blocks), proof]);
+    expect(swings(once(far), once(dwell))).toEqual(['proof-needs-pair 5.proof']);
+    expect(swings(once(dwell), once(far))).toEqual(['proof-needs-pair 5.proof']);
+    expect(swings(once(far, dwell), once(dwell))).toEqual([]);
+    const after = (...blocks: RepeatStep[]) => check([home, near, dwell, shuffled(1, ...blocks), dwell, proof]);
+    expect(after(once(near), once(far))).toEqual(['proof-needs-pair 6.proof']);
+    expect(after(once(near, far), once(far))).toEqual([]);
+    // Nothing in it moves: the far dwell is one in every order.
+    expect(check([home, near, dwell, far, shuffled(1, once(dwell), once(mark('x'))), proof])).toEqual([]);
+  });
+
+  test('more children than each can be looked at after each of the others, those of inner ones counted too', () => {
+    const many = (count: number, order: RepeatStep['order']): RepeatStep => ({ ...shuffled(2, ...letters(count)), order });
+    expect(check([home, many(24, 'shuffled')])).toEqual([]);
+    expect(check([home, many(25, 'shuffled')])).toEqual(['too-many-children 2.repeat']);
+    expect(check([home, many(25, 'as written')])).toEqual([]);
+    expect(check([home, shuffled(1, many(22, 'shuffled'), once(dwell))])).toEqual([]);
+    expect(check([home, shuffled(1, many(23, 'shuffled'), once(dwell))])).toEqual(['too-many-children 2.repeat']);
+    const [finding] = checkProtocol({ formatVersion: 1, name: 'Many', steps: [home, many(3000, 'shuffled')] }, demoRigWide);
+    expect(finding?.message).toMatch(/up to 24 repeats.* these are 3000/);
+  });
+
+  test('in a single pass no child follows itself', () => {
+    const beat: Step = { kind: 'dwell', beat_periods: 2 };
+    // Its beat counts from the swing before the repeat; what it ends with is none.
+    const first = once(beat, { kind: 'settle', for_s: 60 });
+    const swings = once(beat, near);
+    expect(check([home, near, shuffled(1, swings)])).toEqual([]);
+    expect(check([home, near, shuffled(2, swings)])).toEqual([]);
+    expect(check([home, near, shuffled(1, first)])).toEqual([]);
+    expect(check([home, near, shuffled(2, first)])).toEqual(['beat-needs-swing 3.repeat.1.repeat.1.dwell']);
+  });
 });
