@@ -8,7 +8,7 @@ import type { RunStart, SimulatedRun } from '@/shared/archive/run-records';
 import { CODATA_2022_G } from '@/shared/physics/constants';
 import { oscillatorOf } from '@/shared/physics/oscillator';
 import { geometryOf } from '@/shared/physics/torque';
-import { excursionRefusals } from '@/shared/planning/excursion';
+import { excursionOf } from '@/shared/planning/excursion';
 import { checkProtocol } from '@/shared/protocol/check';
 import type { Finding } from '@/shared/protocol/finding';
 import { isShuffled } from '@/shared/protocol/shuffle';
@@ -133,7 +133,7 @@ function assertRehearsable({ document, rig, startUtcMs, simulated }: Request): v
   };
   refusedFor(checkProtocol(document, rig, start));
   const timeline = planTimeline({ protocol: document, rig, timeZone: 'UTC' }, start);
-  refusedFor(excursionRefusals(rig, timeline));
+  refusedFor(excursionOf(rig, timeline).refusals);
   const samples = timeline.durationS * simulated.rateHz;
   if (samples <= MOST_SAMPLES) return;
   throw new Unusable(

@@ -2,7 +2,7 @@ import type { StartCheck } from '@/shared/contracts/rigs';
 import { formatDegrees } from '@/shared/lib/format-angle';
 import { formatDuration } from '@/shared/lib/format-duration';
 import type { Timeline } from '@/shared/protocol/timeline';
-import { checkAtStart } from '../engine/check-at-start';
+import { lookAtStart } from '../engine/check-at-start';
 import type { RigStation } from '../interfaces/rig-stations';
 import type { ControllerState, LinkHealth } from '../interfaces/turntable-link';
 import type { Services } from './services';
@@ -89,7 +89,9 @@ function protocolCheck({ protocol, document, timeZone }: StartPlan, { controller
     { name: 'steps', value: timeline.items.length, unit: '' as const },
     { name: 'dwells', value: timeline.dwells, unit: '' as const },
   ];
-  const [first, ...others] = checkAtStart({ protocol, rig: document, timeZone, shuffleSeed }, controller, nowUtcMs);
+  const { refusals, advice } = lookAtStart({ protocol, rig: document, timeZone, shuffleSeed }, controller, nowUtcMs);
+  const [first, ...others] = refusals;
+  if (first === undefined && advice.length > 0) return note(advice.map(({ message }) => message).join(' '), ...figures);
   if (first === undefined) return pass('Every step can be carried out within the limits of the rig.', ...figures);
   const more = others.length === 0 ? '' : ` (and ${String(others.length)} more)`;
   return fail(`${first.path === null ? '' : `Step ${first.path}: `}${first.message}${more}`, ...figures);

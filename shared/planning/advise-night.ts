@@ -1,13 +1,13 @@
 import type { Finding } from '../protocol/finding';
 import type { RigDocument } from '../rig/document';
-import { excursionFindings } from './excursion';
+import { excursionFindings, nearLimitAdvice } from './excursion';
 import type { PredictedU } from './plan-uncertainty';
 
 /** The noise counts as small beside the geometry below this share of it. */
 const smallShare = 0.1;
 /** Advice that needs the night worked out: where more dwells would not help, and where the pendulum would hit or leave something. */
 export function adviseNight(rig: RigDocument, { predicted, peakRad }: { predicted: PredictedU | null; peakRad: number | null }): Finding[] {
-  return [...geometryDecides(predicted), ...excursionFindings(rig, peakRad)];
+  return [...geometryDecides(predicted), ...excursionFindings(rig, peakRad), ...nearLimitAdvice(rig, peakRad)];
 }
 
 const percent = (share: number) => `${(100 * share).toPrecision(2)} %`;

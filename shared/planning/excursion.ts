@@ -1,3 +1,4 @@
+import { NEAR_LIMIT } from '../conditions/dwell-verdict';
 import { CODATA_2022_G, RAD_PER_DEG } from '../physics/constants';
 import { equilibriumRad } from '../physics/equilibrium';
 import { oscillatorOf } from '../physics/oscillator';
@@ -7,6 +8,8 @@ import { trapezoid } from '../physics/trapezoid';
 import type { Finding } from '../protocol/finding';
 import type { Timeline, TimelineItem } from '../protocol/timeline';
 import type { RigDocument } from '../rig/document';
+
+const milli = (rad: number) => (1000 * rad).toPrecision(3);
 
 /** Share of the free travel that a plan may use. */
 const travelShare = 0.8;
@@ -22,6 +25,22 @@ function excursionLimits({ pendulum, readout }: RigDocument): { name: string; li
   ].flatMap(({ name, limitRad }) => (limitRad === undefined ? [] : [{ name, limitRad }]));
 }
 
+/**
+ * Of a plan that is not refused, where a run may hold all the same: a dwell that ends with the pendulum so near to the end of the readout holds it
+ * (`excursion` of a judged dwell). The travel needs no advice, for it refuses earlier.
+ */
+export function nearLimitAdvice({ readout }: RigDocument, peakRad: number | null): Finding[] {
+  const rangeRad = readout?.range_rad;
+  if (peakRad === null || rangeRad === undefined || peakRad > rangeRad || peakRad < NEAR_LIMIT * rangeRad) return [];
+  return [
+    {
+      code: 'excursion',
+      path: null,
+      message: `The pendulum would swing out to ${milli(peakRad)} mrad, beyond ${NEAR_LIMIT} of readout.range_rad, ${milli(NEAR_LIMIT * rangeRad)} mrad: a dwell that ends with so much holds the run. Take a beat of whole periods, or smaller swings.`,
+    },
+  ];
+}
+
 /** One finding for each limit that the greatest excursion of a plan passes. */
 export function excursionFindings(rig: RigDocument, peakRad: number | null): Finding[] {
   if (peakRad === null) return [];
@@ -30,20 +49,23 @@ export function excursionFindings(rig: RigDocument, peakRad: number | null): Fin
     .map(({ name, limitRad }) => ({
       code: 'excursion',
       path: null,
-      message: `The pendulum would swing out to ${(1000 * peakRad).toPrecision(3)} mrad, beyond ${name}, ${(1000 * limitRad).toPrecision(3)} mrad. Take a beat of whole periods, or smaller swings.`,
+      message: `The pendulum would swing out to ${milli(peakRad)} mrad, beyond ${name}, ${milli(limitRad)} mrad. Take a beat of whole periods, or smaller swings.`,
     }));
 }
 
 /**
- * Why a run that begins then and there is refused for the pendulum's sake: it would swing out too far. Where the greatest that the swings
- * could add up to stays within the limits, the equation is not solved.
+ * How a run that begins then and there stands to the limits of the pendulum: why it is refused, and what is to be told of one that is not. Where
+ * the greatest that the swings could add up to stays within the limits, the equation is not solved.
  */
-export function excursionRefusals(rig: RigDocument, timeline: Pick<Timeline, 'items' | 'startUtcMs' | 'endUtcMs'>): Finding[] {
-  const limits = excursionLimits(rig);
-  if (limits.length === 0) return [];
-  const bound = excursionBoundRad(rig, timeline.items);
-  if (bound === null || limits.every(({ limitRad }) => bound <= limitRad)) return [];
-  return excursionFindings(rig, peakExcursionRad(rig, timeline));
+export function excursionOf(
+  rig: RigDocument,
+  timeline: Pick<Timeline, 'items' | 'startUtcMs' | 'endUtcMs'>,
+): { refusals: Finding[]; advice: Finding[] } {
+  const least = Math.min(...excursionLimits(rig).map(({ limitRad }) => limitRad), NEAR_LIMIT * (rig.readout?.range_rad ?? Infinity));
+  const bound = least === Infinity ? null : excursionBoundRad(rig, timeline.items);
+  if (bound === null || bound < least) return { refusals: [], advice: [] };
+  const peakRad = peakExcursionRad(rig, timeline);
+  return { refusals: excursionFindings(rig, peakRad), advice: nearLimitAdvice(rig, peakRad) };
 }
 
 /** What a move may leave beyond the difference of its equilibria: it passes the angle of greatest torque on its way. */

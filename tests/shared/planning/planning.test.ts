@@ -1,5 +1,5 @@
 import { differenceU, inflation, type Cadence } from '@/shared/planning/night-noise';
-import { excursionRefusals, peakExcursionRad } from '@/shared/planning/excursion';
+import { excursionOf, peakExcursionRad } from '@/shared/planning/excursion';
 import { adviseNight } from '@/shared/planning/advise-night';
 import { predictU } from '@/shared/planning/plan-uncertainty';
 import { alternatives, cadenceOf } from '@/shared/planning/strategies';
@@ -110,10 +110,22 @@ test('swings at one and a half periods pump the pendulum: 2.24 steps of ringing 
   expect(adviseNight(tight, { predicted: null, peakRad: pumped }).map(({ code }) => code)).toEqual(['excursion']);
   expect(adviseNight(tight, { predicted: null, peakRad: 0.7 * pumped })).toEqual([]);
   // A run that would do so is refused, one that stays within 0.8 of the travel is not.
-  const refusals = (periods: number) => excursionRefusals(tight, timelineOf(tight, reversals(periods, 8))).map(({ code }) => code);
+  const refusals = (periods: number) => excursionOf(tight, timelineOf(tight, reversals(periods, 8))).refusals.map(({ code }) => code);
   expect(refusals(1.5)).toEqual(['excursion']);
   expect(refusals(2)).toEqual([]);
-  expect(excursionRefusals(demoRigWide, timelineOf(demoRigWide, reversals(1.5, 8)))).toEqual([]);
+  expect(excursionOf(demoRigWide, timelineOf(demoRigWide, reversals(1.5, 8)))).toEqual({ refusals: [], advice: [] });
+  // Refused beyond the range of the readout; from 0.9 of it on a dwell may end so that the run holds, and that is said beforehand.
+  const seen = (share: number) =>
+    ({ ...demoRigWide, readout: { ...demoRigWide.readout, range_rad: pumped / share } }) as typeof demoRigWide;
+  const codes = (share: number) => {
+    const { refusals: refused, advice } = excursionOf(seen(share), timelineOf(seen(share), reversals(1.5, 8)));
+    return { refused: refused.map(({ code }) => code), told: advice.map(({ code }) => code) };
+  };
+  expect(codes(1.01)).toEqual({ refused: ['excursion'], told: [] });
+  expect(codes(0.95)).toEqual({ refused: [], told: ['excursion'] });
+  expect(codes(0.85)).toEqual({ refused: [], told: [] });
+  const told = adviseNight(seen(0.95), { predicted: null, peakRad: pumped }).map(({ message }) => message);
+  expect(told).toEqual([expect.stringContaining('holds the run')]);
 });
 
 test('what cannot be told is null or empty', () => {
