@@ -15,6 +15,7 @@ import type { Services } from '../services';
 import { excursionCondition, lateCondition, limitConditions } from './channel-conditions';
 import { OutageCall } from './outage-call';
 import { conditionsOf, isSlow, isWatched, runNowOf, type Condition } from './rig-conditions';
+import { delayOf, isNews, keyOf, together } from './told-conditions';
 
 /** How often the rigs are looked at when nothing happens, ms. */
 const usualPaceMs = 5_000;
@@ -30,12 +31,11 @@ export interface WatchParts {
 }
 
 type Place = Omit<AlarmPlace, 'labId'> & { labId: string };
-const keyOf = ({ code, subject }: { code: string; subject: string }) => `${code} ${subject}`;
 
 /** What was last told of a place and holds there. */
 interface Known {
-  /** Those that the database believes to hold, by kind and subject; null before it was asked. */
-  met: Set<string> | null;
+  /** Delays, s, of those that the database believes to hold, by kind and subject; null before it was asked. */
+  met: Map<string, number> | null;
   /** What the last look into the database found; null before there was one. */
   slow: Condition[] | null;
   /** Why they mean nothing now, as last told; undefined before it was. */
@@ -160,7 +160,7 @@ export class AlarmWatch {
       deflectionUtcMs: await this.deflectionUtcMs(labId, facts?.runId ?? null, station),
     });
     const lockedBy = facts === null ? services.locks.lockedBy(rigId) : null;
-    await this.settle({ labId, rigId }, { known, found: [...found, ...(known.slow ?? [])], suppressedWhy: lockedBy });
+    await this.settle({ labId, rigId }, { known, found: together(found, known.slow ?? []), suppressedWhy: lockedBy });
   }
 
   private async lookSlowly(rig: RigRecord): Promise<void> {
@@ -223,9 +223,8 @@ export class AlarmWatch {
     const key = rigId ?? labId;
     const known = this.known.get(key) ?? { met: null, slow: null };
     this.known.set(key, known);
-    known.met ??= new Set(
-      (await metAlarms(this.parts.services.database.db, labId, rigId)).filter(({ snapshot }) => snapshot.met).map(keyOf),
-    );
+    const { db } = this.parts.services.database;
+    known.met ??= new Map((await metAlarms(db, labId, rigId)).map((alarm) => [keyOf(alarm), delayOf(alarm)]));
     return known;
   }
 
@@ -240,14 +239,13 @@ export class AlarmWatch {
     // Whoever began or ended to work at the rig changes what the same conditions mean.
     const toldAnew = known.suppressedWhy !== suppressedWhy;
     for (const condition of found) {
-      const key = keyOf(condition);
-      if (met.has(key) && !toldAnew) continue;
+      if (!isNews(condition, met) && !toldAnew) continue;
       const { code, subject, sinceUtcMs, ...rest } = condition;
       await this.report({ ...at, code, subject }, { ...rest, met: true, suppressedWhy, sinceUtcMs, utcMs });
-      met.add(key);
+      met.set(keyOf(condition), delayOf(condition));
     }
     known.suppressedWhy = suppressedWhy;
-    for (const key of [...met]) {
+    for (const key of [...met.keys()]) {
       const [code = '', ...subject] = key.split(' ');
       if (
         found.some((one) => keyOf(one) === key) ||
