@@ -59,3 +59,20 @@ test('a run that is taken up again, at any moment of it, goes on in the order th
     expect(told).toHaveLength(4);
   }
 });
+
+test('passes of marks alone, begun together before a swing that is sent ahead, are told once each', async () => {
+  const marks = ['a', 'b'].map((label): RepeatStep => ({ kind: 'repeat', times: 1, steps: [{ kind: 'mark', label }] }));
+  const steps: Step[] = [
+    { kind: 'home' },
+    { kind: 'swing', to: 'near' },
+    { kind: 'dwell', for_s: 20 },
+    { kind: 'repeat', times: 10, order: 'shuffled', steps: marks },
+    { kind: 'swing', to: 'far' },
+  ];
+  const bench = makeBench(runStart({ ...protocol, steps }, { shuffleSeed: 11 }));
+  bench.driver.start();
+  await bench.pass(500);
+  expect(bench.driver.facts().state).toBe('finished');
+  const told = bench.store.events.filter(({ kind }) => kind === 'order-drawn').map(({ data }) => data['path']);
+  expect(told).toEqual(Array.from({ length: 10 }, (_, pass) => `4.repeat[${pass + 1}]`));
+});
