@@ -31,6 +31,8 @@ interface Around {
   settings: Awaited<ReturnType<typeof calls.callSettingsOf>>;
   rigName: string | null;
   leftMs: number | null;
+  /** When this was looked up, for a message that goes out now. */
+  nowUtcMs: number;
 }
 
 async function around({ db, clock }: TellParts, alarm: AlarmRecord): Promise<Around> {
@@ -42,17 +44,21 @@ async function around({ db, clock }: TellParts, alarm: AlarmRecord): Promise<Aro
     alarm.runId === null ? null : findRun(db, alarm.labId, alarm.runId),
   ]);
   const endUtcMs = run?.predictedEndAt ?? null;
+  const nowUtcMs = clock.utcMs();
   return {
     ...{ settings, members, timeZone: times.timeZone, labName: times.labName },
     callees: calleesOf(settings, members, run?.startedById ?? null),
     rigName: alarm.rigId === null ? null : (rigs.get(alarm.rigId) ?? null),
-    leftMs: endUtcMs === null ? null : endUtcMs - clock.utcMs(),
+    leftMs: endUtcMs === null ? null : endUtcMs - nowUtcMs,
+    nowUtcMs,
   };
 }
 
 export const placeOf = (rigName: string | null, labName: string) => rigName ?? labName;
 
-function messageOf(alarm: AlarmRecord, { rigName, labName, timeZone }: Pick<Around, 'rigName' | 'labName' | 'timeZone'>): Message {
+type ForMessage = Pick<Around, 'rigName' | 'labName' | 'timeZone' | 'nowUtcMs'>;
+
+function messageOf(alarm: AlarmRecord, { rigName, labName, timeZone, nowUtcMs }: ForMessage): Message {
   const kind = kindOf(alarm.code);
   const at = formatClock(alarm.raisedAt ?? alarm.changedAt, { timeZone, precision: 'seconds' });
   return {
@@ -60,7 +66,7 @@ function messageOf(alarm: AlarmRecord, { rigName, labName, timeZone }: Pick<Arou
     paragraphs: [
       `${at} ${timeZone}: ${oneLine(alarm.words === '' ? kind.cause : alarm.words)}`,
       `What it means: ${kind.consequence}`,
-      `What to do: ${isAlarmCode(alarm.code) ? answerAt(alarm.code, at) : kind.answer}`,
+      `What to do: ${isAlarmCode(alarm.code) ? answerAt(alarm.code, formatClock(nowUtcMs, { timeZone })) : kind.answer}`,
       'Acknowledge it when you take care of it; otherwise the next person is rung.',
     ],
     path: `/alarms/${alarm.id}`,

@@ -217,7 +217,7 @@ const kinds = {
     title: 'Run will pass the end of the night window',
     cause: 'Holds or bad dwells have moved the predicted finish beyond the hours of the room.',
     consequence: 'Cleaners, guards or the day’s work would meet a running rig.',
-    answer: 'Hold or stop it in time, or let the lab know.',
+    answer: 'Hold it after the dwell that makes a pair whole and stop it then: what was measured counts. Or let the lab know.',
   },
   'not-armed': {
     ...usual,

@@ -71,8 +71,8 @@ export function worryUtcMs(predictedEndUtcMs: number): number {
 /** Hours of the evening in which whoever started the run may still come back to the rig (common practice, no source). */
 const evening = { from: '12:00', until: '23:30' };
 
-/** What to do, told at this time of day, hh:mm in the lab's zone. */
+/** What to do, for whoever is told at this time of day, hh:mm in the lab's zone. */
 export function answerAt(code: AlarmCode, clock: string): string {
   const early = code === 'proof-failed' && clock >= evening.from && clock < evening.until;
-  return early ? `It is early enough to come back: ${alarmKinds[code].answer}` : alarmKinds[code].answer;
+  return early ? `It is early enough to come back. ${alarmKinds[code].answer}` : alarmKinds[code].answer;
 }

@@ -32,7 +32,7 @@ describe('the table of alarms', () => {
   });
 
   test('a first pair that is off asks to come back until half past eleven; nothing else does, and nobody is sent for in the night', () => {
-    const early = (code: AlarmCode, clock: string) => answerAt(code, clock).startsWith('It is early enough to come back: ');
+    const early = (code: AlarmCode, clock: string) => answerAt(code, clock).startsWith('It is early enough to come back. ');
     expect(['22:30:00', '23:29:59', '23:30:00', '02:00:00', '11:59:59'].map((clock) => early('proof-failed', clock))).toEqual([
       ...[true, true, false, false, false],
     ]);
