@@ -24,6 +24,8 @@ export const schedules = pgTable(
     state: text('state', { enum: ['active', 'paused', 'ended'] })
       .notNull()
       .default('active'),
+    /** When somebody paused, continued or ended it last; null: nobody did. */
+    stateChangedAt: instant('state_changed_at'),
     /** Every start up to here has been decided about. */
     decidedUntilAt: instant('decided_until_at').notNull(),
     /** In whose name it starts. */

@@ -52,5 +52,9 @@ function statusOf({ state }: CalendarItem): ICalEventStatus {
   return cancelled.includes(state) ? ICalEventStatus.CANCELLED : ICalEventStatus.CONFIRMED;
 }
 
-/** Never falls (RFC 5545 3.8.7.4): a program that has heard of a skip must hear of it when the skip is taken back. In units of 10 s. */
-const sequenceOf = ({ changedAt }: CalendarItem): number => (changedAt === null ? 0 : Math.floor(Date.parse(changedAt) / 10_000));
+/** Before any change; in s from here on the number has room until 2088. */
+const firstUtcMs = Date.UTC(2020, 0);
+
+/** Rises with each change (RFC 5545 3.8.7.4): a program that has heard of a skip or a pause must hear of it when that is over. */
+const sequenceOf = ({ changedAt }: CalendarItem): number =>
+  changedAt === null ? 0 : Math.max(0, Math.floor((Date.parse(changedAt) - firstUtcMs) / 1000));

@@ -54,15 +54,17 @@ export async function calendarOf(db: Handle, span: CalendarSpan): Promise<Calend
   const { labId, timeZone, fromUtcMs, untilUtcMs } = span;
   const schedules = await allSchedules(db, labId);
   const rigs = new Map((await listRigs(db, labId)).map((rig) => [rig.id, rig]));
-  const hours = await hoursOfRooms(db, labId);
+  const rooms = await hoursOfRooms(db, labId);
   const decided = new Map<string, StartRow>();
   for (const row of await startsBetween(db, labId, { fromUtcMs, toUtcMs: untilUtcMs }))
     decided.set(startKey(row.scheduleId, row.dueAt), row);
   const items = schedules.flatMap((schedule) => {
     const rig = rigs.get(schedule.rigId) as RigRecord;
-    const room = { document: rig.document, hours: hours.get(rig.id) ?? openHours, timeZone };
+    const known = rooms.get(rig.id);
+    const room = { document: rig.document, hours: known?.hours ?? openHours, timeZone };
+    const changedAt = Math.max(schedule.stateChangedAt ?? 0, known?.changedAt ?? 0);
     return occurrencesBetween(schedule.plan, timeZone, { afterUtcMs: Math.max(fromUtcMs, schedule.madeAt) - 1, untilUtcMs })
-      .map((occurrence) => itemOf(schedule, { occurrence, room, row: decided.get(startKey(schedule.id, occurrence.dueUtcMs)) }))
+      .map((occurrence) => itemOf(schedule, { occurrence, room, changedAt, row: decided.get(startKey(schedule.id, occurrence.dueUtcMs)) }))
       .filter((item) => item !== null);
   });
   return items.sort((a, b) => a.dueAt.localeCompare(b.dueAt) || a.rigName.localeCompare(b.rigName));
@@ -73,11 +75,13 @@ const startKey = (scheduleId: string, dueUtcMs: number) => `${scheduleId} ${Stri
 interface StartParts {
   occurrence: Occurrence;
   room: Room;
+  /** When its schedule or the hours of its room were changed last, UTC ms; 0: never. */
+  changedAt: number;
   row: StartRow | undefined;
 }
 
 /** Null for what will never be: a start after the end of its schedule, or one that passed while it was paused. */
-function itemOf(schedule: ScheduleRecord, { occurrence: { dueUtcMs, remark }, room, row }: StartParts): CalendarItem | null {
+function itemOf(schedule: ScheduleRecord, { occurrence: { dueUtcMs, remark }, room, changedAt, row }: StartParts): CalendarItem | null {
   const stay = stayOf(schedule, room, dueUtcMs);
   const item = {
     scheduleId: schedule.id,
@@ -89,7 +93,7 @@ function itemOf(schedule: ScheduleRecord, { occurrence: { dueUtcMs, remark }, ro
     endsAt: isoOf(stay.endUtcMs),
     remark,
     runId: row?.runId ?? null,
-    changedAt: isoOrNull(row?.decidedAt ?? null),
+    changedAt: isoOrNull(Math.max(changedAt, row?.decidedAt ?? 0) || null),
   };
   if (row?.outcome != null) return { ...item, state: row.outcome === 'taken' ? 'planned' : row.outcome, why: row.why };
   if (dueUtcMs <= schedule.decidedUntilAt || schedule.state === 'ended') return null;

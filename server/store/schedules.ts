@@ -100,12 +100,12 @@ export async function insertSchedule(db: Handle, schedule: NewSchedule, maker: M
 export async function changeScheduleState(
   db: Handle,
   { labId, scheduleId }: { labId: string; scheduleId: string },
-  state: ScheduleRow['state'],
+  { state, nowUtcMs }: { state: ScheduleRow['state']; nowUtcMs: number },
 ): Promise<boolean> {
   const own = and(eq(schedules.labId, labId), eq(schedules.id, scheduleId));
   const changed = await db
     .update(schedules)
-    .set({ state })
+    .set({ state, stateChangedAt: nowUtcMs })
     .where(and(own, ne(schedules.state, 'ended'), ne(schedules.state, state)));
   return changed.rowCount === 1;
 }
@@ -200,14 +200,15 @@ export async function startsBetween(
     .orderBy(asc(scheduleStarts.dueAt));
 }
 
-/** Hours of the rooms of a lab's rigs, by rig; a rig without a row has no limits. */
-export async function hoursOfRooms(db: Handle, labId: string): Promise<ReadonlyMap<string, RoomHours>> {
-  const rows = await db.select({ rigId: roomHours.rigId, hours: roomHours.hours }).from(roomHours).where(eq(roomHours.labId, labId));
-  return new Map(rows.map(({ rigId, hours }) => [rigId, hours]));
+/** Hours of the rooms of a lab's rigs, by rig, and since when they are so; a rig without a row has no limits. */
+export async function hoursOfRooms(db: Handle, labId: string): Promise<ReadonlyMap<string, { hours: RoomHours; changedAt: number }>> {
+  const { rigId, hours, changedAt } = roomHours;
+  const rows = await db.select({ rigId, hours, changedAt }).from(roomHours).where(eq(roomHours.labId, labId));
+  return new Map(rows.map((row) => [row.rigId, row]));
 }
 
 export async function hoursOfRoom(db: Handle, { labId, rigId }: { labId: string; rigId: string }): Promise<RoomHours> {
-  return (await hoursOfRooms(db, labId)).get(rigId) ?? openHours;
+  return (await hoursOfRooms(db, labId)).get(rigId)?.hours ?? openHours;
 }
 
 export async function setRoomHours(

@@ -20,7 +20,7 @@ export const calendarItemSchema = z.strictObject({
   /** What the time of day means where the clocks change; null on all other days. */
   remark: z.string().nullable(),
   runId: idSchema.nullable(),
-  /** When something was decided about this start last, as that it is skipped, or is not; null: nothing ever was. */
+  /** When something was decided last that concerns this start: itself, its schedule or the hours of its room; null: nothing ever was. */
   changedAt: instantSchema.nullable(),
 });
 export type CalendarItem = z.infer<typeof calendarItemSchema>;

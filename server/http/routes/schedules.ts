@@ -39,11 +39,12 @@ const planning = [
   mount(contracts.changeSchedule, async (context) => {
     const { params, membership, services, body } = context;
     const schedule = await load(services, membership.labId, params.scheduleId);
+    const nowUtcMs = services.clock.utcMs();
     const entry = { kind: `schedule.${body.state}`, data: () => ({ scheduleId: schedule.id }) };
     await audited(context, entry, async (tx) => {
       // Nothing that passed while it was paused is made up for.
-      if (body.state === 'active') await store.setDecidedUntil(tx, schedule, services.clock.utcMs());
-      if (await store.changeScheduleState(tx, { labId: schedule.labId, scheduleId: schedule.id }, body.state)) return;
+      if (body.state === 'active') await store.setDecidedUntil(tx, schedule, nowUtcMs);
+      if (await store.changeScheduleState(tx, { labId: schedule.labId, scheduleId: schedule.id }, { state: body.state, nowUtcMs })) return;
       throw new ProblemError(
         'not-possible-now',
         schedule.state === 'ended' ? 'The schedule has ended. Make a new one.' : stateWords[body.state],

@@ -147,10 +147,11 @@ const hasMore = ({ plan }: store.ScheduleRecord, timeZone: string, nowUtcMs: num
 
 /** After its last start a schedule ends by itself. */
 async function endOf(services: Services, { labId, id }: store.ScheduleRecord): Promise<void> {
+  const nowUtcMs = services.clock.utcMs();
   await services.database.db.transaction(async (tx) => {
-    if (!(await store.changeScheduleState(tx, { labId, scheduleId: id }, 'ended'))) return;
+    if (!(await store.changeScheduleState(tx, { labId, scheduleId: id }, { state: 'ended', nowUtcMs }))) return;
     const who = { id: null, name: 'the scheduler' };
-    const fact = { labId, who, kind: 'schedule.ended', data: { scheduleId: id }, utcMs: services.clock.utcMs() };
+    const fact = { labId, who, kind: 'schedule.ended', data: { scheduleId: id }, utcMs: nowUtcMs };
     await appendAudit(tx, fact, services.sha256);
   });
 }

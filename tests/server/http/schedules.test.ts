@@ -182,14 +182,33 @@ test('a calendar program reads it at a secret address, and no longer when that i
   const skip = (skipped: boolean) =>
     lab.as('operator', 'PUT', `${base}/schedules/${scheduleId}/skips`).send({ dueAt: '2031-03-04T21:00:00Z', skipped }).expect(200);
   const before = await revisionOf();
+  await lab.advance(2_000);
   await skip(true);
   const skipped = await revisionOf();
-  await lab.advance(20_000);
+  await lab.advance(2_000);
   await skip(false);
   const back = await revisionOf();
   expect([before.status, skipped.status, back.status]).toEqual(['CONFIRMED', 'CANCELLED', 'CONFIRMED']);
   expect(before.sequence).toBeLessThan(skipped.sequence);
   expect(skipped.sequence).toBeLessThan(back.sequence);
+  // So do a pause and a blackout, which cross it out too.
+  const hours = `${base}/rigs/${demoIds.rig}/hours`;
+  const blackouts = [{ from: '2031-03-04', until: '2031-03-06', why: 'floor is laid' }];
+  const { body: room } = await lab.as('viewer', 'GET', hours).expect(200);
+  const changes = [
+    () => lab.as('operator', 'PATCH', `${base}/schedules/${scheduleId}`).send({ state: 'paused' }),
+    () => lab.as('operator', 'PATCH', `${base}/schedules/${scheduleId}`).send({ state: 'active' }),
+    () => lab.as('keeper', 'PUT', hours).send({ ...room, blackouts }),
+    () => lab.as('keeper', 'PUT', hours).send(room),
+  ];
+  const revisions = [back];
+  for (const change of changes) {
+    await lab.advance(2_000);
+    await change().expect(200);
+    revisions.push(await revisionOf());
+  }
+  expect(revisions.map(({ status }) => status)).toEqual(['CONFIRMED', 'TENTATIVE', 'CONFIRMED', 'CANCELLED', 'CONFIRMED']);
+  expect(revisions.map(({ sequence }) => sequence)).toEqual([...new Set(revisions.map(({ sequence }) => sequence))].sort((a, b) => a - b));
   const again = new ICAL.Component(ICAL.parse((await read().expect(200)).text)).getAllSubcomponents('vevent');
   expect(again.map((component) => component.getFirstPropertyValue('uid'))).toEqual(events.map(({ uid }) => uid));
   expect(new Set(events.map(({ uid }) => uid)).size).toBe(events.length);

@@ -1,0 +1,1 @@
+ALTER TABLE "schedules" ADD COLUMN "state_changed_at" timestamp (6) with time zone;
