@@ -8,6 +8,7 @@ import { runSummarySchema } from '@/shared/contracts/runs';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol, sha256 } from '@/tests/support/lab-server';
 import { sha256Hex } from '@/server/evaluation/sha256';
+import { withoutDatabase } from './without-database';
 
 jest.setTimeout(60_000);
 
@@ -240,18 +241,12 @@ describe('hold and stop', () => {
     const runId = await lab.run(quickProtocol());
     await lab.advance(3_600_000, () => lab.services.supervisor.driverOf(runId)?.facts().current?.kind === 'swing');
     await lab.advance(1_000);
-    const { pool } = lab.services.database;
-    const working = { connect: pool.connect.bind(pool), query: pool.query.bind(pool) };
-    const away = () => Promise.reject(Object.assign(new Error('connect ECONNREFUSED 127.0.0.1'), { code: 'ECONNREFUSED' }));
-    await lab.world.withoutDatabase(async () => {
-      Object.assign(pool, { connect: away, query: away });
+    await withoutDatabase(lab, async () => {
       expect((await lab.as('viewer', 'GET', runs).expect(503)).body.code).toBe('database-away');
       expect(lab.station().link.controller()?.moving).toBe(true);
       await Promise.all([lab.intervene(runId, 'stop', { who: 'viewer' }).expect(202), lab.advance(5_000)]);
       expect(lab.station().link.controller()?.moving).toBe(false);
       expect(lab.services.supervisor.driverOf(runId)?.facts().reason).toMatch(/The database is away since \d\d:\d\d:\d\d UTC/);
-      Object.assign(pool, working);
-      await lab.advance(10_000);
     });
     expect((await lab.until(runId, 'stopped')).intervention).toMatchObject({
       kind: 'stop',
