@@ -13,6 +13,7 @@ import type { ExclusionView } from '@/shared/contracts/exclusions';
 import { listSteps, type StepRowView } from '@/shared/contracts/runs';
 import { formatFixed, unitSign } from '@/shared/lib/format-number';
 import { ExclusionList, useExclusions } from './exclusion-list';
+import { ExportLinks, type Span } from './export-links';
 
 const points = 3000;
 
@@ -100,11 +101,6 @@ function Excluded({ runId }: { runId: string }) {
 const spansInForce = (exclusions: readonly ExclusionView[]) =>
   exclusions.filter(({ withdrawn }) => withdrawn === null).map(({ startUtcMs, endUtcMs }) => ({ from: startUtcMs, to: endUtcMs }));
 
-interface Span {
-  fromUtcMs: number;
-  toUtcMs: number;
-}
-
 /** Samples of a part of the run, thinned by the server to what can be drawn. */
 function useSamples(runId: string, channelId: string, span: Span | null) {
   const { labId } = useLab();
@@ -158,6 +154,7 @@ function ChannelPlot({ runId, channelId }: { runId: string; channelId: string })
         {formatFixed(coarse.total, { decimals: 0 })} samples
         {coarse.total > coarse.utcMs.length ? '; least and greatest of each stretch are drawn, all of them when you look closer' : ''}.
       </Label>
+      <ExportLinks channel={coarse.channel} whole={{ fromUtcMs: first, toUtcMs: last }} shown={wanted === '' ? null : parseSpan(wanted)} />
     </Panel>
   );
 }

@@ -2,6 +2,8 @@
 export interface SampleStore {
   append(labId: string, channelId: string, batch: SampleBatch): Promise<{ stored: number; known: number }>;
   read(labId: string, channelId: string, window: { fromUtcMs: number; toUtcMs: number }): Promise<SampleBatch>;
+  /** The same in order of time, a page at a time: no more than one is in memory, and nothing is held in between. */
+  pages(labId: string, channelId: string, window: { fromUtcMs: number; toUtcMs: number }): AsyncGenerator<SampleBatch>;
 }
 
 /** Mid-exposure instants (UTC ms, microsecond resolution) and values in the channel's unit; equal lengths. */

@@ -1,6 +1,5 @@
-import { and, asc, eq, sql } from 'drizzle-orm';
+import { and, asc, eq } from 'drizzle-orm';
 import { channelLimits, channels } from '@/db/schema';
-import { timestampOfUtcMs } from '@/db/schema/columns';
 import type { ChannelLimit } from '@/shared/alarms/limits';
 import { one, type Handle } from './database';
 
@@ -47,43 +46,4 @@ export async function removeLimit(
   if (found === undefined) return false;
   await db.delete(channelLimits).where(and(eq(channelLimits.labId, labId), eq(channelLimits.id, limitId)));
   return true;
-}
-
-export interface ChannelState {
-  last: { utcMs: number; value: number } | null;
-  /** Least-squares line over the window, in the channel's unit per hour; null for fewer than three samples. */
-  slopePerH: number | null;
-  /** Mean of the window, least and greatest of its recent part; null where either holds nothing. */
-  extremes: { mean: number; least: number; greatest: number } | null;
-}
-
-/** What a channel says now. */
-export async function channelNow(
-  db: Handle,
-  channel: { labId: string; channelId: string },
-  { utcMs, windowMs, recentMs = windowMs }: { utcMs: number; windowMs: number; recentMs?: number },
-): Promise<ChannelState> {
-  const own = sql`lab_id = ${channel.labId} and channel_id = ${channel.channelId}`;
-  const [from, recent] = [sql`${timestampOfUtcMs(utcMs - windowMs)}::timestamptz`, sql`${timestampOfUtcMs(utcMs - recentMs)}::timestamptz`];
-  const lasts = await db.execute<{ ms: number; value: number }>(
-    sql`select (extract(epoch from at) * 1000)::double precision as ms, value from samples where ${own} order by at desc limit 1`,
-  );
-  const sums = await db.execute<{
-    count: number;
-    slope: number | null;
-    mean: number | null;
-    least: number | null;
-    greatest: number | null;
-  }>(
-    sql`select count(*)::int as count, regr_slope(value, extract(epoch from at - ${from}) / 3600) as slope, avg(value) as mean,
-        min(value) filter (where at > ${recent}) as least, max(value) filter (where at > ${recent}) as greatest
-        from samples where ${own} and at > ${from}`,
-  );
-  const [last, sum] = [lasts.rows[0], sums.rows[0]];
-  const { count = 0, slope = null, mean = null, least = null, greatest = null } = sum ?? {};
-  return {
-    last: last === undefined ? null : { utcMs: last.ms, value: last.value },
-    slopePerH: count < 3 ? null : slope,
-    extremes: mean === null || least === null || greatest === null ? null : { mean, least, greatest },
-  };
 }

@@ -168,6 +168,14 @@ export async function assertSameValues(
   if (row !== undefined) throw new ConflictingSamplesError(batch.utcMs[Number(row.index) - 1] as number);
 }
 
+export async function findChannel(db: Handle, labId: string, channelId: string): Promise<ChannelRecord | null> {
+  const [found] = await db
+    .select()
+    .from(channels)
+    .where(and(eq(channels.labId, labId), eq(channels.id, channelId)));
+  return found ?? null;
+}
+
 /** Channels of a rig that belong to all its runs. */
 export const channelsOfRig = (db: Handle, labId: string, rigId: string): Promise<ChannelRecord[]> =>
   db

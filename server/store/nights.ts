@@ -41,27 +41,6 @@ export async function nightsBefore(
   }));
 }
 
-export interface Spacing {
-  /** The longest time without a sample within the window, its ends counted, s. */
-  longestGapS: number;
-  /** Half of the samples follow the one before at least as soon, s; null with fewer than two. */
-  usualS: number | null;
-}
-
-/** How the samples of a channel lie within a window. */
-export async function spacingOf(connection: Connection, window: SampleWindow): Promise<Spacing> {
-  const { rows } = await connection.pool.query<{ gap: number | null; usual: number | null }>(
-    `with edged as (
-       select at, false as edge from samples where lab_id = $1 and channel_id = $2 and at between $3 and $4
-       union all select $3::timestamptz, true union all select $4::timestamptz, true),
-     gaps as (select edge or lag(edge) over ordered as edge, at - lag(at) over ordered as gap from edged window ordered as (order by at))
-     select extract(epoch from max(gap))::double precision as gap,
-       extract(epoch from percentile_disc(0.5) within group (order by gap) filter (where not edge))::double precision as usual from gaps`,
-    [window.labId, window.channelId, new Date(window.fromUtcMs), new Date(window.toUtcMs)],
-  );
-  return { longestGapS: rows[0]?.gap ?? (window.toUtcMs - window.fromUtcMs) / 1000, usualS: rows[0]?.usual ?? null };
-}
-
 /** Least and greatest value of a channel within a window, and its mean within each of the spans; null without a sample. */
 export async function rangeAndMeans(
   connection: Connection,

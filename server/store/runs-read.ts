@@ -6,6 +6,7 @@ import type { ChannelRecord } from './imports';
 import type { RehearsalRecords } from '../interfaces/heavy-tasks';
 import type { Connection, Database, Handle } from './database';
 import { createRunStore } from './run-store';
+import { lastSampleUtcMs } from './sample-summaries';
 
 const summaryColumns = {
   labId: runs.labId,
@@ -153,15 +154,15 @@ export async function sampleFlow(
   const result = await connection.pool.query<SampleFlow>(
     `with recent as (select at, at - lag(at) over (order by at) as gap from samples where lab_id = $1 and channel_id = $2 and at >= $3)
      select (extract(epoch from min(at)) * 1000)::double precision as "firstUtcMs",
-       (extract(epoch from coalesce(max(at), (select max(at) from samples where lab_id = $1 and channel_id = $2))) * 1000)::double precision as "lastUtcMs",
+       (extract(epoch from max(at)) * 1000)::double precision as "lastUtcMs",
        (extract(epoch from max(gap)) * 1000)::double precision as "longestGapMs"
      from recent`,
     [channel.labId, channel.channelId, new Date(sinceUtcMs)],
   );
-  return result.rows[0] ?? { firstUtcMs: null, lastUtcMs: null, longestGapMs: null };
+  const recent = result.rows[0] ?? { firstUtcMs: null, lastUtcMs: null, longestGapMs: null };
+  return recent.lastUtcMs === null ? { ...recent, lastUtcMs: await lastSampleUtcMs(connection, channel) } : recent;
 }
 
-/** Runs on rigs, of all labs, that have not ended. */
 /** The rig of a run that goes on; null where there is none, it is over, or it is a rehearsal. */
 export async function rigOfRun(
   db: Handle,
@@ -174,6 +175,7 @@ export async function rigOfRun(
   return row ?? null;
 }
 
+/** Runs on rigs, of all labs, that have not ended. */
 export const unfinishedRuns = (db: Handle): Promise<RunRecord[]> =>
   db
     .select()

@@ -11,6 +11,8 @@ import { summariseFresh, summariseSamples } from './sample-summaries';
 
 /** From this many samples on COPY is worth its statements. */
 const copyFromCount = 2000;
+/** About 10 ms of work for whoever writes them out. */
+const samplesAPage = 5000;
 const uniqueViolation = '23505';
 
 /** A batch that cannot be stored: says which sample and why. */
@@ -27,6 +29,7 @@ export function createSampleStore(connection: Connection): SampleStore {
       return connection.bulk((client) => appendSamples(client, { labId, channelId }, batch));
     },
     read: (labId, channelId, window) => connection.bulk((client) => readSamples(client, { labId, channelId }, window)),
+    pages: (labId, channelId, window) => pagesOf(connection, { labId, channelId }, window),
   };
 }
 
@@ -152,18 +155,34 @@ async function copyAside(client: PoolClient, { labId, channelId }: ChannelKey, b
   return result.rowCount ?? 0;
 }
 
-/** Samples of a channel with `fromUtcMs` ≤ instant ≤ `toUtcMs`, in time order. */
+/** A page is asked for by the instant before it, so that whoever reads slowly keeps no connection and no transaction, and whoever goes away leaves nothing behind. */
+async function* pagesOf(
+  connection: Connection,
+  channel: ChannelKey,
+  { fromUtcMs, toUtcMs }: { fromUtcMs: number; toUtcMs: number },
+): AsyncGenerator<SampleBatch> {
+  for (let from = fromUtcMs; from <= toUtcMs;) {
+    const window = { fromUtcMs: from, toUtcMs };
+    const page = await connection.bulk((client) => readSamples(client, channel, window, samplesAPage));
+    if (page.utcMs.length > 0) yield page;
+    if (page.utcMs.length < samplesAPage) return;
+    from = (microsecondsOf(page.utcMs.at(-1) as number) + 1) / 1000;
+  }
+}
+
+/** Samples of a channel with `fromUtcMs` ≤ instant ≤ `toUtcMs`, in time order, the first so many. */
 async function readSamples(
   client: PoolClient,
   { labId, channelId }: ChannelKey,
   window: { fromUtcMs: number; toUtcMs: number },
+  most: number | null = null,
 ): Promise<SampleBatch> {
   if (!isKey(labId) || !isKey(channelId)) return { utcMs: new Float64Array(), value: new Float64Array() };
   // COPY takes no parameters: both ids have the form of a UUID (just checked) and the instants are whole microseconds.
   const between = `at between ${instantSql(window.fromUtcMs)} and ${instantSql(window.toUtcMs)}`;
   const stream = client.query(
     copyTo(
-      `copy (select at, value from samples where lab_id = '${labId}' and channel_id = '${channelId}' and ${between} order by at) to stdout (format binary)`,
+      `copy (select at, value from samples where lab_id = '${labId}' and channel_id = '${channelId}' and ${between} order by at limit ${String(most ?? 'all')}) to stdout (format binary)`,
     ),
   );
   return decodeSamples(stream);

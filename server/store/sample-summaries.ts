@@ -68,18 +68,18 @@ export interface SampleSum {
 const nothing: SampleSum = { count: 0, least: null, greatest: null, mean: null };
 
 /**
- * Rows `(number, since, count, least, least_ms, greatest, greatest_ms, mean)` of the pieces in $3 to $6: a sample is a bucket of its own. Of each piece
+ * Rows `(number, level, since, count, least, least_ms, greatest, greatest_ms, mean)` of the pieces in $3 to $6: a sample is a bucket of its own. Of each piece
  * only what lies in it is read, by the key of the table it comes from.
  */
-const rowsOfPieces = `piece as (select * from unnest($3::int[], $4::smallint[], $5::timestamptz[], $6::timestamptz[]) as piece (number, level, since, until)),
+export const rowsOfPieces = `piece as (select * from unnest($3::int[], $4::smallint[], $5::timestamptz[], $6::timestamptz[]) as piece (number, level, since, until)),
   bucket as (
-    select piece.number, own.at as since, own.count, own.least, (extract(epoch from own.least_at) * 1000)::double precision as least_ms,
+    select piece.number, piece.level, own.at as since, own.count, own.least, (extract(epoch from own.least_at) * 1000)::double precision as least_ms,
       own.greatest, (extract(epoch from own.greatest_at) * 1000)::double precision as greatest_ms, own.mean
     from piece cross join lateral (
       select * from sample_summaries where lab_id = $1 and channel_id = $2 and level = piece.level and at >= piece.since and at < piece.until offset 0) as own
     where piece.level is not null
     union all
-    select piece.number, own.at, 1, own.value, own.ms, own.value, own.ms, own.value
+    select piece.number, piece.level, own.at, 1, own.value, own.ms, own.value, own.ms, own.value
     from piece cross join lateral (
       select at, value, (extract(epoch from at) * 1000)::double precision as ms from samples
       where lab_id = $1 and channel_id = $2 and at >= piece.since and at < piece.until offset 0) as own
@@ -88,12 +88,12 @@ const rowsOfPieces = `piece as (select * from unnest($3::int[], $4::smallint[], 
 /** Everything before the year 1 and after the year 9999 is as far away as these. */
 const clampedUs = (utcMs: number) => microsecondsOf(Math.min(Math.max(utcMs, Date.UTC(1, 0, 1)), Date.UTC(9999, 0, 1)));
 
-const stretchOf = ({ fromUtcMs, toUtcMs }: Pick<SampleWindow, 'fromUtcMs' | 'toUtcMs'>) => ({
+export const stretchOf = ({ fromUtcMs, toUtcMs }: Pick<SampleWindow, 'fromUtcMs' | 'toUtcMs'>) => ({
   fromUs: clampedUs(fromUtcMs),
   toUs: clampedUs(toUtcMs) + 1,
 });
 
-const parametersOf = ({ labId, channelId }: ChannelKey, pieces: readonly (Piece & { number: number })[]) => [
+export const parametersOf = ({ labId, channelId }: ChannelKey, pieces: readonly (Piece & { number: number })[]) => [
   labId,
   channelId,
   pieces.map(({ number }) => number),
@@ -159,17 +159,22 @@ export async function extremesOf(
   return { utcMs: points.map(({ ms }) => ms), value: points.map(({ value }) => value) };
 }
 
-/** The last instant at which a channel has a sample, or null. The newest bucket tells where to look, so that no other month is asked. */
-export async function lastSampleUtcMs(connection: Connection, channel: ChannelKey): Promise<number | null> {
+/** The last sample of a channel, or null. The newest bucket tells where to look, so that no other month is asked. */
+export async function lastSampleOf(connection: Connection, channel: ChannelKey): Promise<{ utcMs: number; value: number } | null> {
+  if (!isKey(channel.labId) || !isKey(channel.channelId)) return null;
   const own = [channel.labId, channel.channelId];
   const { rows: buckets } = await connection.pool.query<{ at: string }>(
     'select at::text from sample_summaries where lab_id = $1 and channel_id = $2 and level = 0 order by at desc limit 1',
     own,
   );
   if (buckets[0] === undefined) return null;
-  const { rows } = await connection.pool.query<{ ms: number | null }>(
-    `select (extract(epoch from max(at)) * 1000)::double precision as ms from samples where lab_id = $1 and channel_id = $2 and at >= $3`,
+  const { rows } = await connection.pool.query<{ utcMs: number; value: number }>(
+    `select (extract(epoch from at) * 1000)::double precision as "utcMs", value from samples
+     where lab_id = $1 and channel_id = $2 and at >= $3 order by at desc limit 1`,
     [...own, buckets[0].at],
   );
-  return rows[0]?.ms ?? null;
+  return rows[0] ?? null;
 }
+
+export const lastSampleUtcMs = async (connection: Connection, channel: ChannelKey): Promise<number | null> =>
+  (await lastSampleOf(connection, channel))?.utcMs ?? null;

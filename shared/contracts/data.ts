@@ -124,6 +124,33 @@ export const commitImport = defineRoute({
   response: z.strictObject({ channel: channelViewSchema, stored: z.number().int(), known: z.number().int() }),
   problems: ['invalid-input', 'not-found', 'unreadable-data', 'not-possible-now', 'already-exists'],
 });
+/** Both ends belong to the window; without one it reaches as far as the channel does. */
+const exportEndSchema = z.coerce.number().min(0).max(Date.UTC(9999, 0)).optional();
+const exportQuerySchema = z.strictObject({ fromUtcMs: exportEndSchema, toUtcMs: exportEndSchema });
+const channelPath = '/labs/:labId/channels/:channelId';
+
+export const exportSamplesCsv = defineRoute({
+  name: 'exportSamplesCsv',
+  summary: 'Every sample of a channel within a window as CSV: instants in UTC to the microsecond, values that read back to the same number',
+  method: 'GET',
+  path: `${channelPath}/samples.csv`,
+  access: 'read',
+  status: 200,
+  query: exportQuerySchema,
+  produces: 'text/csv',
+  problems: ['invalid-input', 'not-found'],
+});
+export const exportSamplesNdjson = defineRoute({
+  name: 'exportSamplesNdjson',
+  summary: 'The same as lines of JSON, as devices send them',
+  method: 'GET',
+  path: `${channelPath}/samples.ndjson`,
+  access: 'read',
+  status: 200,
+  query: exportQuerySchema,
+  produces: 'application/x-ndjson',
+  problems: ['invalid-input', 'not-found'],
+});
 export const readSamples = defineRoute({
   name: 'readSamples',
   summary: 'Samples of a channel within a run for a plot: least and greatest in each of `points` / 2 intervals',

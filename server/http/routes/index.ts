@@ -15,6 +15,7 @@ import { peopleRoutes } from './people';
 import { protocolRoutes } from './protocols';
 import { rigRoutes } from './rigs';
 import { runRoutes } from './runs';
+import { sampleExportRoutes } from './sample-export';
 import { scheduleRoutes } from './schedules';
 import { serviceRoutes } from './service';
 import { stepNoteRoutes } from './step-notes';
@@ -35,6 +36,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...scheduleRoutes,
   ...doorRoutes,
   ...dataRoutes,
+  ...sampleExportRoutes,
   ...deviceRoutes,
   ...exclusionRoutes,
   ...stepNoteRoutes,

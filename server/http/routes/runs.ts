@@ -6,6 +6,7 @@ import { findProtocol, findRevision } from '@/server/store/protocols';
 import { findMassSet, findRig } from '@/server/store/rigs';
 import * as store from '@/server/store/runs-read';
 import { archiveInputOf, assertEnded } from '../archive-input';
+import { attach, fileWords } from '../attachment';
 import { assertFreshTap, beginRehearsal, beginRun } from '../begin-run';
 import { atTheRig, rigOfBody, rigOfItsRun } from '../desk/at-the-rig';
 import { isDatabaseAway } from '../../store/failures';
@@ -90,16 +91,10 @@ const viewRoutes = [
   }),
 ];
 
-/** A name that says what the file is, with nothing in it that a file system or a header could misread. */
-function attach(res: Response, run: store.RunRecord, ending: string): void {
-  const name =
-    run.protocolName
-      .toLowerCase()
-      .replaceAll(/[^a-z0-9]+/g, '-')
-      .replaceAll(/^-|-$/g, '')
-      .slice(0, 40) || 'run';
+/** A name that says what the file is. */
+function attachOf(res: Response, run: store.RunRecord, ending: string): void {
   const day = isoOf(startUtcMsOf(run)).slice(0, 10);
-  res.set('Content-Disposition', `attachment; filename="evenfall-${day}-${name}-${run.id.slice(0, 8)}${ending}"`);
+  attach(res, `evenfall-${day}-${fileWords(run.protocolName, 'run')}-${run.id.slice(0, 8)}${ending}`);
 }
 
 const recordRoutes = [
@@ -111,7 +106,7 @@ const recordRoutes = [
   mount(contracts.stepsCsv, async ({ params, membership, services, res }) => {
     const run = await load(services, membership.labId, params.runId);
     const text = stepsCsv(await store.readSteps(services.database.db, { labId: run.labId, runId: run.id }));
-    attach(res, run, '-steps.csv');
+    attachOf(res, run, '-steps.csv');
     res.type('text/csv').send(text);
     return undefined;
   }),
@@ -134,7 +129,7 @@ const recordRoutes = [
     const run = await load(services, membership.labId, params.runId);
     assertEnded(run);
     const zip = await services.tasks.zipArchive(await archiveInputOf(services, run));
-    attach(res, run, '.zip');
+    attachOf(res, run, '.zip');
     res.type('application/zip').send(Buffer.from(zip.buffer, zip.byteOffset, zip.byteLength));
     return undefined;
   }),

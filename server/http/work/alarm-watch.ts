@@ -169,7 +169,7 @@ export class AlarmWatch {
     const known = await this.knownOf(rig.labId, rig.id);
     const utcMs = services.clock.utcMs();
     const limits = await limitsOfRig(db, rig.labId, rig.id);
-    const slow = await limitConditions(db, limits, { utcMs, isMet: (code, subject) => known.met?.has(keyOf({ code, subject })) === true });
+    const slow = await limitConditions(services.database, limits, { utcMs, isMet: (code, subject) => known.met?.has(keyOf({ code, subject })) === true });
     const driver = services.supervisor.activeOf(rig.id);
     if (driver !== null && !driver.isOver()) {
       const facts = driver.facts();
@@ -178,7 +178,7 @@ export class AlarmWatch {
       slow.push(...(await lateCondition(db, facts, { labId: rig.labId, rigId: rig.id, timeZone })));
       const station = services.stations.get(rig.id);
       const channel = station === null ? null : await this.deflectionOf(rig.labId, facts.runId, station);
-      if (channel !== null) slow.push(...(await excursionCondition(db, rig, { channel, utcMs, runId: facts.runId })));
+      if (channel !== null) slow.push(...(await excursionCondition(services.database, rig, { channel, utcMs, runId: facts.runId })));
     }
     known.slow = slow;
   }

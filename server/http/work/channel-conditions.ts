@@ -5,9 +5,11 @@ import { scaleOf, toRad, type ChannelScale } from '@/shared/evaluation/channel-s
 import type { RigDocument } from '@/shared/rig/document';
 import type { RoomHours } from '@/shared/schedule/plan';
 import { againstRoom } from '@/shared/schedule/room';
-import { channelNow, type ChannelState, type LimitRecord } from '../../store/channel-limits';
-import type { Database } from '../../store/database';
+import type { LimitRecord } from '../../store/channel-limits';
+import { extremesAbout, slopePerHOf } from '../../store/channel-now';
+import type { Connection, Database } from '../../store/database';
 import type { RigRecord } from '../../store/rigs';
+import { lastSampleOf } from '../../store/sample-summaries';
 import { hoursOfRoom } from '../../store/schedules';
 import type { RunFacts } from '../../engine/run-facts';
 import type { Condition } from './rig-conditions';
@@ -18,15 +20,18 @@ export const subjectOfLimit = (limitId: string) => `limit ${limitId}`;
 const codes = { level: 'channel-level', slope: 'channel-slope', silence: 'channel-silent' } as const;
 
 export async function limitConditions(
-  db: Database,
+  connection: Connection,
   limits: readonly LimitRecord[],
   { utcMs, isMet }: { utcMs: number; isMet: (code: Condition['code'], subject: string) => boolean },
 ): Promise<Condition[]> {
   const found: Condition[] = [];
   for (const { id, limit, channelId, channelName, unit, labId } of limits) {
     const [code, subject] = [codes[limit.kind], subjectOfLimit(id)];
-    const windowS = limit.kind === 'slope' ? limit.windowS : 600;
-    const now = await channelNow(db, { labId, channelId }, { utcMs, windowMs: 1000 * windowS });
+    const key = { labId, channelId };
+    const now = {
+      last: await lastSampleOf(connection, key),
+      slopePerH: limit.kind === 'slope' ? await slopePerHOf(connection, key, { utcMs, windowMs: 1000 * limit.windowS }) : null,
+    };
     if (!passesLimit(limit, { utcMs, ...now, met: isMet(code, subject) })) continue;
     const value = now.last === null ? '' : `${String(Number(now.last.value.toPrecision(4)))} ${unit}`;
     const words = {
@@ -61,13 +66,14 @@ export function lateWords(
 
 /** The pendulum beyond 90 % of its clearance or of the range of its readout, about its mean over the last four periods. */
 export async function excursionCondition(
-  db: Database,
+  connection: Connection,
   { document, labId }: RigRecord,
   { channel, utcMs, runId }: { channel: Deflection & { id: string }; utcMs: number; runId: string },
 ): Promise<Condition[]> {
   const period = document.measured?.period_s?.value;
   if (period === undefined || swingRoomRad(document) === null) return [];
-  const { extremes } = await channelNow(db, { labId, channelId: channel.id }, { utcMs, windowMs: 4000 * period, recentMs: 1000 * period });
+  const spans = { utcMs, windowMs: 4000 * period, recentMs: 1000 * period };
+  const extremes = await extremesAbout(connection, { labId, channelId: channel.id }, spans);
   const words = extremes === null ? null : excursionWords(document, channel, extremes);
   return words === null ? [] : [{ code: 'excursion', subject: '', words, runId, onDelayS: Math.round(period) }];
 }
@@ -81,7 +87,7 @@ interface Deflection {
 export function excursionWords(
   document: RigDocument,
   channel: Deflection,
-  { mean, least, greatest }: NonNullable<ChannelState['extremes']>,
+  { mean, least, greatest }: { mean: number; least: number; greatest: number },
 ): string | null {
   const roomRad = swingRoomRad(document);
   const scale = scaleIfTold(channel, document);

@@ -10,6 +10,7 @@ export interface Things {
   protocolId: string;
   protocolEtag: string;
   runId: string;
+  channelId: string;
   importId: string;
   evaluationId: string;
   invitationId: string;
@@ -43,6 +44,7 @@ const mapping = { delimiter: ',', decimal: '.', headerRow: true, timeColumn: 0, 
 const lab = ({ labId }: Things) => ({ labId });
 const rig = ({ labId, rigId }: Things) => ({ labId, rigId });
 const run = ({ labId, runId }: Things) => ({ labId, runId });
+const channel = ({ labId, channelId }: Things) => ({ labId, channelId });
 const protocol = ({ labId, protocolId }: Things) => ({ labId, protocolId });
 const file = ({ labId, importId }: Things) => ({ labId, importId });
 const nobody = randomUUID();
@@ -170,6 +172,8 @@ export const rows: Readonly<Record<string, Row>> = {
   checkImport: { params: file, body: () => ({ mapping }), allowed: 200 },
   commitImport: { params: file, body: () => ({ mapping: { ...mapping, valueColumn: 0 }, channelName: 'readout' }), allowed: 400 },
   readSamples: { params: run, allowed: 200 },
+  exportSamplesCsv: { params: channel, query: () => ({ fromUtcMs: '5', toUtcMs: '4' }), allowed: 400 },
+  exportSamplesNdjson: { params: channel, allowed: 200 },
   listDevices: { params: rig, allowed: 200 },
   makeDeviceToken: {
     params: rig,

@@ -46,6 +46,7 @@ async function thingsOf(userId: string, { labId, rigId }: { labId: string; rigId
   const evaluation = await ask('POST', `/runs/${run.body.id}/evaluations`).send({}).expect(202);
   const file = await ask('POST', `/runs/${run.body.id}/imports`).send({ fileName: 'deflection.csv' }).expect(201);
   await ask('PUT', `/imports/${file.body.id}/content`).set('Content-Type', 'text/csv').send(rows.putImportContent?.raw).expect(200);
+  const samples = await ask('GET', `/runs/${run.body.id}/samples`).expect(200);
   const invitation = await ask('POST', '/invitations')
     .send({ email: `guest.${labId}@quillfen.example`, role: 'viewer' })
     .expect(201);
@@ -56,6 +57,7 @@ async function thingsOf(userId: string, { labId, rigId }: { labId: string; rigId
     protocolId: protocol.body.id,
     protocolEtag,
     runId: run.body.id,
+    channelId: samples.body.channel.id,
     importId: file.body.id,
     evaluationId: evaluation.body.id,
     invitationId: invitation.body.id,

@@ -269,3 +269,32 @@ describe('samples for a plot', () => {
     expect(body.total).toBeGreaterThan(500);
   });
 });
+
+describe('every sample as a file', () => {
+  test('CSV and lines of JSON hold what is stored, from end to end of the window; another lab’s channel is not found', async () => {
+    const channelId = (await commit(await sent(deflection()), 'exported').expect(200)).body.channel.id as string;
+    const ask = (file: string) => lab.as('viewer', 'GET', `${labPath}/channels/${channelId}/${file}`);
+    const csv = await ask(`samples.csv?fromUtcMs=${String(startUtcMs + 2000)}&toUtcMs=${String(startUtcMs + 6000)}`).expect(200);
+    const at = (s: number) => new Date(startUtcMs + 1000 * s).toISOString().replace('Z', '000Z');
+    const value = (index: number) => String(Number((100 * Math.sin(index / 40)).toFixed(3)));
+    expect(csv.text).toBe(`time_utc,value (urad)\n${[1, 2, 3].map((index) => `${at(2 * index)},${value(index)}\n`).join('')}`);
+    expect(csv.headers['content-disposition']).toMatch(/^attachment; filename="evenfall-exported-\d{4}-\d\d-\d\d-[0-9a-f]{8}\.csv"$/);
+    const all = await ask('samples.csv').expect(200);
+    expect(all.text.split('\n').slice(1)).toEqual(
+      deflection()
+        .split('\n')
+        .slice(1)
+        .map((line) => line.replace(/Z,(.*)/, (_, number: string) => `000Z,${String(Number(number))}`)),
+    );
+    const json = await ask('samples.ndjson').buffer(true).parse((res, done) => {
+      let text = '';
+      res.on('data', (chunk: Buffer) => (text += chunk.toString()));
+      res.on('end', () => done(null, text));
+    }).expect(200);
+    expect(json.headers['content-type']).toContain('application/x-ndjson');
+    expect(JSON.parse((json.body as string).split('\n')[1] ?? '')).toEqual({ channel: 'exported', time_utc: at(2), value: Number(value(1)) });
+    await ask('samples.csv?fromUtcMs=5&toUtcMs=4').expect(400);
+    await ask('samples.csv?fromUtcMs=1e300').expect(400);
+    await lab.as('viewer', 'GET', `${labPath}/channels/00000000-0000-4000-8000-000000000000/samples.csv`).expect(404);
+  });
+});

@@ -1,8 +1,9 @@
 import { eq } from 'drizzle-orm';
 import { runs } from '@/db/schema';
 import { endEvaluation, queueEvaluation } from '@/server/store/evaluations';
-import { nightsBefore, rangeAndMeans, spacingOf } from '@/server/store/nights';
+import { nightsBefore, rangeAndMeans } from '@/server/store/nights';
 import { createSampleStore } from '@/server/store/sample-store';
+import { spacingOf } from '@/server/store/spacing';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { databaseOfThisFile } from '@/tests/support/database';

@@ -70,6 +70,20 @@ test('two who store the same at once store it once', async () => {
   expect((await store.read(labId, channelId, allTime)).value).toEqual(batch.value);
 });
 
+test('pages hold every sample of a window once, in order, whatever their number', async () => {
+  const { store, labId, channelId } = await freshChannel();
+  await store.append(labId, channelId, batchOf(10_001));
+  const [pages, all] = [[] as SampleBatch[], await store.read(labId, channelId, allTime)];
+  for await (const page of store.pages(labId, channelId, allTime)) pages.push(page);
+  expect(pages.length).toBeGreaterThan(2);
+  expect(pages.flatMap(({ utcMs }) => [...utcMs])).toEqual([...all.utcMs]);
+  expect(pages.flatMap(({ value }) => [...value])).toEqual([...all.value]);
+  const window = { fromUtcMs: all.utcMs[10] as number, toUtcMs: all.utcMs[5009] as number };
+  const inside: SampleBatch[] = [];
+  for await (const page of store.pages(labId, channelId, window)) inside.push(page);
+  expect(inside.flatMap(({ value }) => [...value])).toEqual([...all.value.slice(10, 5010)]);
+});
+
 test('a window takes both of its ends', async () => {
   const { store, labId, channelId } = await freshChannel();
   const batch = batchOf(10);
