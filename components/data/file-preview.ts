@@ -3,6 +3,10 @@ import type { ImportMapping } from '@/shared/contracts/data';
 
 const rowsShown = 6;
 
+/** The first bytes of a file as text; by the names of the WHATWG's Encoding Standard, whose windows-1252 holds all that Latin-1 prints. */
+export const textOf = (head: ArrayBuffer, encoding: NonNullable<ImportMapping['encoding']>): string =>
+  new TextDecoder(encoding === 'latin-1' ? 'windows-1252' : encoding).decode(head);
+
 /** The first rows of a text as the chosen delimiter parts them. */
 export function previewRows(head: string, delimiter: ImportMapping['delimiter']): string[][] {
   const parsed = Papa.parse<string[]>(head, { delimiter, preview: rowsShown + 1, skipEmptyLines: 'greedy' });

@@ -1,13 +1,17 @@
 import type { ImportCheck, ImportMapping, ImportView } from '@/shared/contracts/data';
+import { isTimeZone } from '@/shared/lib/is-time-zone';
 import type { MappingKey, RememberedMapping } from './remembered-mapping';
 
 /** An import as the person fills it in: nothing typed is lost by an error or a new answer. Pure. */
 
 /** Null: the file does not tell and the person has not said it yet. */
-export type MappingDraft = { [K in Exclude<keyof ImportMapping, 'elapsedFrom' | 'timesWithoutZoneAreUtc'>]: ImportMapping[K] | null } & {
+export type MappingDraft = { [K in Exclude<keyof ImportMapping, 'elapsedFrom' | 'timesWithoutZoneAreUtc' | 'timeZone' | 'encoding'>]:
+  | ImportMapping[K]
+  | null } & {
+  encoding: NonNullable<ImportMapping['encoding']>;
   elapsedFrom: string;
-  /** Whether times that name no zone are UTC; null while the file has such times and nobody has said so. */
-  timesWithoutZoneAreUtc: boolean | null;
+  /** The zone of times that name none, `UTC` or an IANA name; null while the file has such times and nobody has said so; empty where they are refused. */
+  zone: string | null;
 };
 
 export interface ImportState {
@@ -55,6 +59,7 @@ export function importReducer(state: ImportState, action: ImportAction): ImportS
 }
 
 const fieldWords: Record<MappingKey, string> = {
+  encoding: 'how the text is encoded',
   delimiter: 'what parts the columns',
   decimal: 'the decimal sign',
   headerRow: 'whether the first row holds names',
@@ -62,6 +67,7 @@ const fieldWords: Record<MappingKey, string> = {
   timeFormat: 'how the time is written',
   elapsedFrom: 'when time 0 was',
   timesWithoutZoneAreUtc: 'which zone the times are in',
+  timeZone: 'a time zone by its name, such as Europe/Oslo',
   valueColumn: 'the column of the deflection',
   unit: 'the unit of the deflection',
 };
@@ -73,10 +79,16 @@ function received(state: ImportState, imported: ImportView, remembered: Remember
   const names = preview.columns.map((column) => column.name);
   const fits =
     remembered !== null && remembered.columns.length === names.length && remembered.columns.every((name, index) => name === names[index]);
-  const guessed = { elapsedFrom: '', timesWithoutZoneAreUtc: false, ...preview.mapping };
-  const open = Object.fromEntries(ambiguous.filter((key) => key !== 'elapsedFrom').map((key) => [key, null]));
-  const draft: MappingDraft = fits ? { ...guessed, ...remembered.mapping, elapsedFrom: '' } : { ...guessed, ...open };
+  const guessed = draftOf(preview.mapping);
+  const open = Object.fromEntries(
+    ambiguous.filter((key) => key !== 'elapsedFrom').map((key) => [key === 'timesWithoutZoneAreUtc' ? 'zone' : key, null]),
+  );
+  const draft: MappingDraft = fits ? { ...draftOf(remembered.mapping), encoding: guessed.encoding } : { ...guessed, ...open };
   return { ...state, imported, draft, ambiguous: fits ? [] : ambiguous, remembered: fits, check: null };
+}
+
+function draftOf({ timesWithoutZoneAreUtc: utc, timeZone, ...mapping }: RememberedMapping['mapping']): MappingDraft {
+  return { encoding: 'utf-8', ...mapping, elapsedFrom: '', zone: utc === true ? 'UTC' : (timeZone ?? '') };
 }
 
 /** ISO 8601 in UTC with Z, as the archive writes it. */
@@ -85,15 +97,19 @@ export const isInstant = (text: string): boolean =>
 
 /** The mapping once all is stated; before that, what is still missing, in words. */
 export function completeMapping(draft: MappingDraft): { mapping: ImportMapping; missing: null } | { mapping: null; missing: string[] } {
-  const { elapsedFrom, timesWithoutZoneAreUtc: utc, ...rest } = draft;
+  const { elapsedFrom, zone, encoding, ...rest } = draft;
   const missing = (Object.keys(rest) as (keyof typeof rest)[]).filter((key) => rest[key] === null).map((key) => fieldWords[key]);
   if (draft.timeFormat === 'elapsed-s' && !isInstant(elapsedFrom)) missing.push(fieldWords.elapsedFrom);
-  if (draft.timeFormat === 'iso' && utc === null) missing.push(fieldWords.timesWithoutZoneAreUtc);
+  const zoned = draft.timeFormat === 'iso';
+  if (zoned && zone === null) missing.push(fieldWords.timesWithoutZoneAreUtc);
+  else if (zoned && zone !== '' && zone !== 'UTC' && !isTimeZone(zone ?? '')) missing.push(fieldWords.timeZone);
   if (draft.timeColumn !== null && draft.timeColumn === draft.valueColumn) missing.push('two different columns for time and deflection');
   if (missing.length > 0) return { mapping: null, missing };
   const extra = {
     ...(draft.timeFormat === 'elapsed-s' ? { elapsedFrom } : {}),
-    ...(draft.timeFormat === 'iso' && utc === true ? { timesWithoutZoneAreUtc: true } : {}),
+    ...(encoding === 'utf-8' ? {} : { encoding }),
+    ...(zoned && zone === 'UTC' ? { timesWithoutZoneAreUtc: true } : {}),
+    ...(zoned && zone !== null && zone !== '' && zone !== 'UTC' ? { timeZone: zone } : {}),
   };
   return { mapping: { ...(rest as ImportMapping), ...extra }, missing: null };
 }

@@ -8,7 +8,7 @@ import { getRun, type RunView } from '@/shared/contracts/runs';
 import { formatFixed } from '@/shared/lib/format-number';
 import { CheckPanel } from './check-panel';
 import { FileDrop } from './file-drop';
-import { columnNames, previewRows } from './file-preview';
+import { columnNames, previewRows, textOf } from './file-preview';
 import { MappingForm } from './mapping-form';
 import { PreviewTable } from './preview-table';
 import { useImport } from './use-import';
@@ -72,10 +72,11 @@ function ImportWork({ view, channelName }: { view: RunView; channelName: string 
 type Work = ReturnType<typeof useImport>;
 
 function ChosenFile({ work, view }: { work: Work; view: RunView }) {
+  const { timeZone } = useLab();
   const { state, head } = work;
   const { draft, imported } = state;
   if (draft === null || imported === null) return null;
-  const rows = draft.delimiter === null ? (imported.preview?.rows ?? []) : previewRows(head, draft.delimiter);
+  const rows = draft.delimiter === null ? (imported.preview?.rows ?? []) : previewRows(textOf(head, draft.encoding), draft.delimiter);
   const names = columnNames(rows, draft.headerRow === true);
   return (
     <View className="gap-4">
@@ -104,7 +105,14 @@ function ChosenFile({ work, view }: { work: Work; view: RunView }) {
             : 'Guessed from the file. What it does not tell stays open until you state it.'
         }
       >
-        <MappingForm draft={draft} ambiguous={state.ambiguous} names={names} runStart={view.startedAt} onChange={work.change} />
+        <MappingForm
+          draft={draft}
+          ambiguous={state.ambiguous}
+          names={names}
+          runStart={view.startedAt}
+          timeZone={timeZone}
+          onChange={work.change}
+        />
       </Section>
       <View className="wide:w-[270px]">
         <Field

@@ -1,5 +1,6 @@
 import { View } from 'react-native';
 import { Button, Field, Select } from '@/components/ui';
+import { isTimeZone } from '@/shared/lib/is-time-zone';
 import type { ImportMapping } from '@/shared/contracts/data';
 import { isInstant, type MappingDraft } from './import-draft';
 import type { MappingKey } from './remembered-mapping';
@@ -10,9 +11,17 @@ interface MappingFormProps {
   names: readonly string[];
   /** When the run started, ISO 8601; null before its start. */
   runStart: string | null;
+  /** Of the lab. */
+  timeZone: string;
   onChange: (change: Partial<MappingDraft>) => void;
 }
 
+const encodings: { value: NonNullable<ImportMapping['encoding']>; label: string }[] = [
+  { value: 'utf-8', label: 'UTF-8' },
+  { value: 'utf-16le', label: 'UTF-16, little-endian' },
+  { value: 'utf-16be', label: 'UTF-16, big-endian' },
+  { value: 'latin-1', label: 'Latin-1' },
+];
 const delimiters: { value: ImportMapping['delimiter']; label: string }[] = [
   { value: ',', label: 'comma' },
   { value: ';', label: 'semicolon' },
@@ -34,7 +43,6 @@ const formats: { value: ImportMapping['timeFormat']; label: string }[] = [
   { value: 'epoch-ms', label: 'milliseconds since 1970, UTC' },
   { value: 'elapsed-s', label: 'seconds since a beginning' },
 ];
-const zones: { value: 'utc'; label: string }[] = [{ value: 'utc', label: 'UTC' }];
 const units: { value: ImportMapping['unit']; label: string }[] = [
   { value: 'rad', label: 'rad, pendulum angle' },
   { value: 'mrad', label: 'mrad, pendulum angle' },
@@ -80,17 +88,63 @@ function Choice<V extends string>({
   );
 }
 
+/** What times mean that name no zone. Of a local time that the clocks showed twice, or never, the check tells the row. */
+function ZoneChoice({ zone, labZone, onChange }: { zone: string | null; labZone: string; onChange: (zone: string) => void }) {
+  const listed = zone === null || zone === 'UTC' || zone === labZone;
+  const options = [
+    { value: 'UTC', label: 'UTC' },
+    ...(labZone === 'UTC' ? [] : [{ value: labZone, label: `what clocks show in ${labZone}` }]),
+    { value: 'other', label: 'what clocks show elsewhere' },
+  ];
+  return (
+    <>
+      <Choice
+        label="Times without a zone are"
+        value={listed ? zone : 'other'}
+        options={options}
+        open={false}
+        onChange={(next) => onChange(next === 'other' ? ' ' : next)}
+        testID="map-zone"
+        unstated="The times name no zone. Please state it; no zone is guessed."
+      />
+      {listed ? null : (
+        <View className="wide:w-[270px]">
+          <Field
+            label="Name of the zone"
+            value={zone.trim()}
+            onChange={(name) => onChange(name === '' ? ' ' : name)}
+            placeholder="Europe/Oslo"
+            testID="map-zone-name"
+            error={zone.trim() === '' || isTimeZone(zone) ? undefined : 'Write it as Region/City, for example Europe/Oslo.'}
+          />
+        </View>
+      )}
+    </>
+  );
+}
+
 /** How the file is to be read. */
-export function MappingForm({ draft, ambiguous, names, runStart, onChange }: MappingFormProps) {
+export function MappingForm({ draft, ambiguous, names, runStart, timeZone, onChange }: MappingFormProps) {
   const columns = names.map((name, index) => ({ value: String(index), label: `${index + 1}: ${name}` }));
   const column = (index: number | null) => (index === null ? null : String(index));
   const open = (key: MappingKey) => ambiguous.includes(key);
+  const signs = delimiters.some(({ value }) => value === draft.delimiter) || draft.delimiter === null ? delimiters : [...delimiters, { value: draft.delimiter, label: draft.delimiter }];
   return (
     <View className="gap-4 wide:flex-row wide:flex-wrap" testID="mapping-form">
+      {draft.encoding === 'utf-8' ? null : (
+        <Choice
+          label="The text is encoded as"
+          value={draft.encoding}
+          options={encodings}
+          open={false}
+          onChange={(encoding) => onChange({ encoding })}
+          testID="map-encoding"
+        />
+      )}
       <Choice
         label="Columns are parted by"
         value={draft.delimiter}
-        options={delimiters}
+        options={signs}
         open={open('delimiter')}
         onChange={(delimiter) => onChange({ delimiter })}
         testID="map-delimiter"
@@ -127,16 +181,8 @@ export function MappingForm({ draft, ambiguous, names, runStart, onChange }: Map
         onChange={(timeFormat) => onChange({ timeFormat })}
         testID="map-format"
       />
-      {draft.timeFormat === 'iso' && (draft.timesWithoutZoneAreUtc === null || open('timesWithoutZoneAreUtc')) ? (
-        <Choice
-          label="Times without a zone are"
-          value={draft.timesWithoutZoneAreUtc === true ? 'utc' : null}
-          options={zones}
-          open={false}
-          onChange={() => onChange({ timesWithoutZoneAreUtc: true })}
-          testID="map-zone"
-          unstated="The times name no zone. Local times cannot be read safely, because summer time repeats an hour: write UTC, or an offset such as +01:00, into the file."
-        />
+      {draft.timeFormat === 'iso' && (draft.zone === null || draft.zone !== '' || open('timesWithoutZoneAreUtc')) ? (
+        <ZoneChoice zone={draft.zone} labZone={timeZone} onChange={(zone) => onChange({ zone })} />
       ) : null}
       <Choice
         label="Column of the deflection"

@@ -39,7 +39,7 @@ export function useImport(runId: string, channelName: string) {
   const queries = useQueryClient();
   const [state, dispatch] = useReducer(importReducer, channelName, noImport);
   const { step, failure, attempt, forget } = useAttempt();
-  const [head, setHead] = useState('');
+  const [head, setHead] = useState<ArrayBuffer>(() => new ArrayBuffer(0));
   const [stored, setStored] = useState<{ stored: number; known: number; channel: { id: string; name: string } } | null>(null);
 
   const mapping = state.draft === null ? null : completeMapping(state.draft);
@@ -54,7 +54,7 @@ export function useImport(runId: string, channelName: string) {
     mapping,
     send: (file: File) =>
       attempt('sending', `${file.name} was not taken in`, async () => {
-        setHead(await file.slice(0, headBytes).text());
+        setHead(await file.slice(0, headBytes).arrayBuffer());
         const begun = await call(beginImport, { params: { labId, runId }, body: { fileName: file.name } });
         const { data } = await call(putImportContent, { params: { labId, importId: begun.data.id }, raw: file });
         dispatch({ kind: 'received', imported: data, remembered: readRemembered(labId) });

@@ -6,6 +6,7 @@ import type { SampleBatch } from '@/server/interfaces/sample-store';
 import { readPieces, type ImportRecord } from '@/server/store/imports';
 import type { RunRecord } from '@/server/store/runs-read';
 import { formatDuration } from '@/shared/lib/format-duration';
+import { isTimeZone } from '@/shared/lib/is-time-zone';
 import { isoOrNull } from './maker';
 import { ProblemError } from './problem-error';
 import { startUtcMsOf } from './run-window';
@@ -16,6 +17,15 @@ export function assertMapping(mapping: ImportMapping): void {
   if (mapping.timeFormat === 'elapsed-s' && mapping.elapsedFrom === undefined)
     throw new ProblemError('invalid-input', 'Times in seconds elapsed need the instant they count from: state elapsedFrom in UTC.', [
       { path: 'mapping.elapsedFrom', message: 'an instant in UTC, for example 2031-03-14T22:00:00Z' },
+    ]);
+  const { timeZone, timesWithoutZoneAreUtc } = mapping;
+  if (timeZone !== undefined && !isTimeZone(timeZone))
+    throw new ProblemError('invalid-input', `There is no time zone ${timeZone}.`, [
+      { path: 'mapping.timeZone', message: 'the name of a zone, for example Europe/Oslo' },
+    ]);
+  if (timeZone !== undefined && timesWithoutZoneAreUtc === true)
+    throw new ProblemError('invalid-input', `Times without a zone cannot be UTC and of ${timeZone} at once; say one of both.`, [
+      { path: 'mapping.timeZone', message: 'nothing, where such times are UTC' },
     ]);
   if (mapping.timeColumn === mapping.valueColumn)
     throw new ProblemError('invalid-input', 'Time and value are said to stand in the same column; choose two.', [

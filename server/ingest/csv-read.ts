@@ -2,7 +2,8 @@ import { Readable } from 'node:stream';
 import { CsvError, Parser } from 'csv-parse';
 import type { ImportMapping } from '@/shared/contracts/data';
 import type { SampleBatch } from '../interfaces/sample-store';
-import { readNumber, readTime, UnreadableField } from './csv-fields';
+import { readNumber, timeReader, UnreadableField } from './csv-fields';
+import { asUtf8 } from './csv-text';
 
 export interface CsvProblem {
   /** Line of the file, from 1; null for a problem of the whole file. */
@@ -43,7 +44,7 @@ export async function readCsv(
 ): Promise<CsvReading> {
   const reader = new RowReader(options.mapping, options.limits);
   const handover = new Handover(options.take ?? (async () => undefined));
-  const parser = Readable.from(chunks).pipe(
+  const parser = Readable.from(asUtf8(chunks, options.mapping.encoding)).pipe(
     new LineParser({
       bom: true,
       delimiter: options.mapping.delimiter,
@@ -120,11 +121,14 @@ class RowReader {
   private readonly problems: CsvProblem[] = [];
   private problemCount = 0;
 
+  private readonly readTime: ReturnType<typeof timeReader>;
+
   constructor(
     private readonly mapping: ImportMapping,
     private readonly limits: CsvLimits,
   ) {
     this.headerDone = !mapping.headerRow;
+    this.readTime = timeReader(mapping);
   }
 
   row(record: string[], line: number): void {
@@ -157,7 +161,7 @@ class RowReader {
   }
 
   private time(field: string | undefined): number {
-    const utcMs = readTime(field, this.mapping);
+    const utcMs = this.readTime(field);
     const last = this.lastUtcMs;
     if (utcMs > this.limits.nowUtcMs + dayMs)
       throw new UnreadableField(`the time ${iso(utcMs)} lies in the future: are time format and zone of the mapping right?`);

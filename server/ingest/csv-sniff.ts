@@ -2,13 +2,13 @@ import { parse } from 'csv-parse/sync';
 import type * as z from 'zod';
 import type { ImportMapping, importPreviewSchema } from '@/shared/contracts/data';
 import { hasZone, isNumber, looksIso, looksLocalDate } from './csv-fields';
+import { readHead, UnreadableFile } from './csv-text';
 
 export type ImportPreview = z.infer<typeof importPreviewSchema>;
 
-/** A file of which no row can be shown: what it is instead. */
-export class UnreadableFile extends Error {}
-
-const delimiters = [',', ';', '\t', '|', ' '] as const;
+const delimiters = [',', ';', '\t', '|', ' '];
+/** Tried only where none of those parts anything. */
+const rareDelimiters = ['^', '~', '!', '&', '%', '$', '@', '*', '=', '/', '\\', '_', '§', '¦'];
 const rowsRead = 60;
 const rowsShown = 12;
 
@@ -20,9 +20,10 @@ const rowsShown = 12;
  * @throws UnreadableFile when there is no table in it
  */
 export function sniffCsv(head: Uint8Array, whole: boolean): ImportPreview {
-  const text = decode(head, whole);
-  const best = delimiters.map((delimiter) => tableOf(text, delimiter)).sort((a, b) => b.score - a.score);
-  const [table, second] = best as [Table, Table];
+  const { text, encoding } = readHead(head, whole);
+  const tables = (signs: readonly string[]) => signs.map((sign) => tableOf(text, sign)).sort((a, b) => b.score - a.score);
+  const usual = tables(delimiters);
+  const [table, second] = ((usual[0]?.columns ?? 0) < 2 ? tables(rareDelimiters) : usual) as [Table, Table];
   if (table.columns < 2)
     throw new UnreadableFile(
       'No table was found: a row needs at least two columns, a time and a value, parted by a comma, semicolon, tab, bar or space.',
@@ -40,6 +41,7 @@ export function sniffCsv(head: Uint8Array, whole: boolean): ImportPreview {
   const unit = unitOf(header[valueColumn] ?? '');
   if (unit === null) ambiguous.add('unit');
   const mapping: ImportMapping = {
+    ...(encoding === 'utf-8' ? {} : { encoding }),
     delimiter: table.delimiter,
     decimal,
     headerRow,
@@ -58,18 +60,6 @@ export function sniffCsv(head: Uint8Array, whole: boolean): ImportPreview {
     mapping,
     ambiguous: [...ambiguous],
   };
-}
-
-function decode(head: Uint8Array, whole: boolean): string {
-  if (head.length === 0) throw new UnreadableFile('The file is empty.');
-  if ((head[0] === 0xff && head[1] === 0xfe) || (head[0] === 0xfe && head[1] === 0xff))
-    throw new UnreadableFile('The file is UTF-16; save it as UTF-8 text.');
-  if (head.includes(0)) throw new UnreadableFile('The file is not text: it holds zero bytes. A spreadsheet must be saved as CSV first.');
-  try {
-    return new TextDecoder('utf-8', { fatal: true }).decode(head, { stream: !whole });
-  } catch {
-    throw new UnreadableFile('The file is not UTF-8 text; save it as UTF-8.');
-  }
 }
 
 interface Table {

@@ -17,15 +17,20 @@ export type ChannelView = z.infer<typeof channelViewSchema>;
 
 /** How a CSV is to be read. Columns are counted from 0. */
 export const importMappingSchema = z.strictObject({
-  delimiter: z.enum([',', ';', '\t', '|', ' ']),
+  /** UTF-8 where nothing is said. A byte order mark counts for more. */
+  encoding: z.enum(['utf-8', 'utf-16le', 'utf-16be', 'latin-1']).optional(),
+  /** One sign that is no part of a number, a name or a time. */
+  delimiter: z.string().regex(/^[^\p{L}\p{N}"'+.\-:#\r\n\u0000]$/u, 'one sign such as , ; | or a tab, no letter, digit, quotation mark or sign of a number'),
   decimal: z.enum(['.', ',']),
   headerRow: z.boolean(),
   timeColumn: z.number().int().nonnegative(),
   timeFormat: z.enum(['iso', 'epoch-s', 'epoch-ms', 'elapsed-s']),
   /** The instant of elapsed time 0; needed for `elapsed-s` only. */
   elapsedFrom: instantSchema.optional(),
-  /** For `iso`: times that name no zone are UTC. Absent: such times are refused. */
+  /** For `iso`: times that name no zone are UTC. Absent, without `timeZone`: such times are refused. */
   timesWithoutZoneAreUtc: z.boolean().optional(),
+  /** For `iso`: times that name no zone are what the clocks of this IANA zone show, `Europe/Oslo` for example. */
+  timeZone: z.string().min(1).max(64).optional(),
   valueColumn: z.number().int().nonnegative(),
   unit: z.enum(['rad', 'mrad', 'urad', 'm', 'mm']),
 });

@@ -162,6 +162,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.reads('channel-plot', new RegExp(`${printed(night.length)} samples`));
     await hand.hears('channel-plot', new RegExp(`Balance ${size} over the run`));
     await hand.page.locator('[data-testid="deflection-plot"] canvas').first().waitFor();
+    const exported = await (await hand.context.request.get((await hand.at('export-csv').getAttribute('href')) ?? '')).text();
     await hand.tapsOn('Show a shorter time');
     await hand.shoots('data');
     const { value, utcMs, channel } = await read(lab(), `${runId}/samples?channelId=${label ?? ''}&points=4000`);
@@ -169,6 +170,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     expect(value).toHaveLength(night.length);
     expect(utcMs).toEqual(night.map((sample) => sample.utcMs));
     expect(Math.max(...night.map(({ rad }, index) => Math.abs(rad * 1e6 - value[index])))).toBeLessThan(6e-4);
+    expect(exported.split('\n').slice(1, -1).map((line) => Number(line.split(',')[1]))).toEqual(value);
   });
 
   chapter('the same file again adds nothing', async () => {

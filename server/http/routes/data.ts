@@ -1,7 +1,8 @@
 import type { Readable } from 'node:stream';
 import * as contracts from '@/shared/contracts/data';
 import type { ChannelView, ImportView } from '@/shared/contracts/data';
-import { sniffCsv, UnreadableFile } from '@/server/ingest/csv-sniff';
+import { sniffCsv } from '@/server/ingest/csv-sniff';
+import { UnreadableFile } from '@/server/ingest/csv-text';
 import { FileTooLarge, FileWatch } from '@/server/ingest/receive-file';
 import * as store from '@/server/store/imports';
 import type { Handle } from '@/server/store/database';

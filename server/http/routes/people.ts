@@ -10,6 +10,7 @@ import { openInvitations, withdrawInvitation, type Invitation } from '@/server/s
 import { changeLab } from '@/server/store/labs';
 import { changeMember, memberOf, membersOf, membershipsOf, type Member } from '@/server/store/people';
 import type { Role } from '@/shared/contracts/roles';
+import { isTimeZone } from '@/shared/lib/is-time-zone';
 import { isDatabaseAway } from '../../store/failures';
 import { isoOf } from '../maker';
 import { originForLinks } from '../origin';
@@ -256,17 +257,6 @@ const labRoutes = [
     return { id: changed.id, name: changed.name, timeZone: changed.timeZone };
   }),
 ];
-
-/** A named zone that this server knows; bare offsets know no daylight saving and are refused. */
-function isTimeZone(name: string): boolean {
-  if (!/^[A-Za-z]/.test(name)) return false;
-  try {
-    new Intl.DateTimeFormat('en', { timeZone: name });
-    return true;
-  } catch {
-    return false;
-  }
-}
 
 /** Sessions, passwords, invitations, members and the lab. */
 export const peopleRoutes = [...sessionRoutes, ...invitationRoutes, ...memberRoutes, ...labRoutes];

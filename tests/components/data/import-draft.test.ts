@@ -38,11 +38,18 @@ test('what the file does not tell stays open until the person states it', () => 
   });
 });
 
-test('times without a zone must be called UTC by the person', () => {
+test('the zone of times without one must be stated by the person', () => {
   const state = received(['timesWithoutZoneAreUtc']);
   expect(mappingOf(state)?.missing).toEqual(['which zone the times are in']);
-  expect(mappingOf(change(state, { timesWithoutZoneAreUtc: true }))?.mapping).toMatchObject({ timesWithoutZoneAreUtc: true });
-  expect(mappingOf(change(state, { timeFormat: 'epoch-s' }))?.mapping).not.toHaveProperty('timesWithoutZoneAreUtc');
+  expect(mappingOf(change(state, { zone: 'UTC' }))?.mapping).toMatchObject({ timesWithoutZoneAreUtc: true });
+  const local = mappingOf(change(state, { zone: 'Europe/Zurich' }))?.mapping;
+  expect(local).toMatchObject({ timeZone: 'Europe/Zurich' });
+  expect(local).not.toHaveProperty('timesWithoutZoneAreUtc');
+  for (const zone of [' ', 'Quillfen', '+01:00'])
+    expect(mappingOf(change(state, { zone }))?.missing).toEqual(['a time zone by its name, such as Europe/Oslo']);
+  const counted = mappingOf(change(state, { zone: 'UTC', timeFormat: 'epoch-s' }))?.mapping;
+  expect(counted).not.toHaveProperty('timesWithoutZoneAreUtc');
+  expect(counted).not.toHaveProperty('timeZone');
 });
 
 test('elapsed time needs its beginning, and one column cannot be both', () => {

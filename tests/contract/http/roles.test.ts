@@ -99,7 +99,7 @@ async function send(
     return { status: 200, body: null };
   }
   const text = await response.text();
-  const isJson = response.headers.get('content-type')?.includes('json') === true;
+  const isJson = response.headers.get('content-type')?.match(/[/+]json/) != null;
   if (response.status >= 400) expect(response.headers.get('content-type')).toBe('application/problem+json; charset=utf-8');
   return { status: response.status, body: isJson ? (JSON.parse(text) as unknown) : text };
 }

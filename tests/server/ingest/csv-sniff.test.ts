@@ -68,9 +68,26 @@ describe('the guess at how a CSV is to be read', () => {
     expect(() => sniff(text)).toThrow(words);
   });
 
-  it('refuses UTF-16 and broken UTF-8', () => {
-    expect(() => sniffCsv(Buffer.from('\ufefft,v\n1,2\n', 'utf16le'), true)).toThrow('UTF-16');
-    expect(() => sniffCsv(Buffer.from([0x74, 0x2c, 0xe9, 0x0a, 0x31, 0x2c, 0x32]), true)).toThrow('not UTF-8');
+  const table = 'Zeit;Ausschlag (µrad)\n2031-03-14T22:00:00Z;1,5\n2031-03-14T22:00:01Z;2,5\n';
+  it.each([
+    ['UTF-8 with its mark', Buffer.from(`\ufeff${table}`), undefined],
+    ['UTF-16, little-endian, with its mark', Buffer.from(`\ufeff${table}`, 'utf16le'), 'utf-16le'],
+    ['UTF-16, little-endian, without', Buffer.from(table, 'utf16le'), 'utf-16le'],
+    ['UTF-16, big-endian', Buffer.from(`\ufeff${table}`, 'utf16le').swap16(), 'utf-16be'],
+    ['Latin-1', Buffer.from(table, 'latin1'), 'latin-1'],
+  ])('reads %s', (_name, bytes, encoding) => {
+    const { mapping, columns } = sniffCsv(bytes, true);
+    expect(mapping.encoding).toBe(encoding);
+    expect(mapping).toMatchObject({ delimiter: ';', decimal: ',', unit: 'urad', headerRow: true });
+    expect(columns.map(({ name }) => name)).toEqual(['Zeit', 'Ausschlag (µrad)']);
+  });
+
+  it('tries a rare sign between the columns where no usual one parts them', () => {
+    expect(sniff('time^theta_rad\n1931724000^1\n1931724001^2\n').mapping.delimiter).toBe('^');
+  });
+
+  it('takes no picture for a table', () => {
+    expect(() => sniffCsv(Buffer.from([0x89, 0x50, 0x4e, 0x47, 0x0d, 0x0a, 0x1a, 0x0a]), true)).toThrow('control codes');
   });
 
   it('does not mind a character cut in two at the end of the first bytes', () => {

@@ -1,0 +1,97 @@
+import * as fc from 'fast-check';
+import { readCsv } from '@/server/ingest/csv-read';
+import { sniffCsv } from '@/server/ingest/csv-sniff';
+import { UnreadableFile } from '@/server/ingest/csv-text';
+import type { SampleBatch } from '@/server/interfaces/sample-store';
+import { importMappingSchema, type ImportMapping } from '@/shared/contracts/data';
+
+/** Files of every kind, good ones and broken ones, and mappings that fit them or do not: nothing crashes, and what is taken in is sound. */
+
+const cases = 5000;
+const nowUtcMs = Date.UTC(2031, 3, 1);
+
+const number = fc.oneof(
+  fc.double().map(String),
+  fc.integer().map(String),
+  fc.constantFrom('1,5', '1.234,5', "1'000", '', 'NaN', '-inf', '+.5', '1e999', '0x10', '٣'),
+);
+const time = fc.oneof(
+  fc.integer({ min: 0, max: 9e8 }).map((s) => new Date(Date.UTC(2010, 0) + s * 1000).toISOString()),
+  fc.integer({ min: 0, max: 2e9 }).map(String),
+  fc.constantFrom(
+    ...['2030-03-31 02:30', '2030-10-27T02:30:00', '2031-02-30T00:00:00Z', '14.3.2031 22:00', '9999-99-99T99:99:99Z'],
+    ...['2031-03-14T22:00:00+99:99', '2031-03-14T22:00:00,5', 'Z'],
+  ),
+);
+const noise = fc.string({ unit: fc.constantFrom(',', ';', '"', "'", '\n', '\r', '\t', '\u0000', '\ufeff', '#', 'é', '𝛼', ' ', '1', '-', '.'), maxLength: 12 });
+const field = fc.oneof({ weight: 4, arbitrary: number }, { weight: 4, arbitrary: time }, { weight: 1, arbitrary: noise });
+const quoted = field.chain((text) => fc.constantFrom(text, `"${text}"`, `"${text}`, `"${text.replaceAll('"', '""')}"`));
+const text = fc
+  .record({
+    mark: fc.constantFrom('', '', '\ufeff'),
+    sign: fc.constantFrom(',', ';', '\t', '|', ' ', '^'),
+    end: fc.constantFrom('\n', '\r\n', '\r', '\n\n'),
+    rows: fc.array(fc.array(quoted, { minLength: 1, maxLength: 4 }), { maxLength: 8 }),
+  })
+  .map(({ mark, sign, end, rows }) => mark + rows.map((row) => row.join(sign)).join(end));
+const encodings = {
+  'utf-8': (words: string) => Buffer.from(words),
+  'utf-16le': (words: string) => Buffer.from(words, 'utf16le'),
+  'utf-16be': (words: string) => Buffer.from(words, 'utf16le').swap16(),
+  'latin-1': (words: string) => Buffer.from(words, 'latin1'),
+};
+const bytes = fc.oneof(
+  { weight: 9, arbitrary: fc.tuple(text, fc.constantFrom(...Object.values(encodings))).map(([words, encode]) => encode(words)) },
+  { weight: 1, arbitrary: fc.uint8Array({ maxLength: 60 }).map((raw) => Buffer.from(raw)) },
+);
+const mappings: fc.Arbitrary<ImportMapping> = fc.record(
+  {
+    encoding: fc.constantFrom('utf-8', 'utf-16le', 'utf-16be', 'latin-1'),
+    delimiter: fc.constantFrom(',', ';', '\t', '|', ' ', '^'),
+    decimal: fc.constantFrom('.', ','),
+    headerRow: fc.boolean(),
+    timeColumn: fc.nat(2),
+    timeFormat: fc.constantFrom('iso', 'epoch-s', 'epoch-ms', 'elapsed-s'),
+    elapsedFrom: fc.constant('2031-03-14T22:00:00Z'),
+    timeZone: fc.constantFrom('Europe/Zurich', 'Australia/Lord_Howe', 'UTC'),
+    valueColumn: fc.nat(2),
+    unit: fc.constantFrom('rad', 'mm'),
+  },
+  { requiredKeys: ['delimiter', 'decimal', 'headerRow', 'timeColumn', 'timeFormat', 'valueColumn', 'unit', 'elapsedFrom'] },
+);
+
+async function* pieces(file: Buffer, size: number): AsyncGenerator<Uint8Array> {
+  for (let from = 0; from < file.length; from += size) yield file.subarray(from, from + size);
+}
+
+/** What a file suggests, or null where it is said to be none. */
+function suggested(file: Buffer): ImportMapping | null {
+  try {
+    return sniffCsv(file, true).mapping;
+  } catch (error) {
+    expect(error).toBeInstanceOf(UnreadableFile);
+    return null;
+  }
+}
+
+test(`${String(cases)} files of every kind are read or refused, and no sample of them is unsound`, async () => {
+  await fc.assert(
+    fc.asyncProperty(bytes, mappings, fc.integer({ min: 1, max: 40 }), async (file, mapping, size) => {
+      const own = size % 2 === 0 ? suggested(file) : null;
+      if (own !== null) expect(importMappingSchema.safeParse(own).success).toBe(true);
+      const taken: SampleBatch[] = [];
+      const reading = await readCsv(pieces(file, size), {
+        mapping: own !== null && own.timeFormat !== 'elapsed-s' ? own : mapping,
+        limits: { greatestSpan: size % 3 === 0 ? 1 : null, nowUtcMs },
+        take: async (batch) => void taken.push(batch),
+      });
+      const [utcMs, value] = [taken.flatMap((batch) => [...batch.utcMs]), taken.flatMap((batch) => [...batch.value])];
+      expect(utcMs.length).toBe(value.length);
+      expect(utcMs.length).toBeLessThanOrEqual(reading.rows);
+      expect(reading.problemCount).toBeGreaterThanOrEqual(reading.rows === 0 ? 1 : reading.rows - utcMs.length > 0 ? 1 : 0);
+      expect([...utcMs, ...value].every(Number.isFinite)).toBe(true);
+      expect(utcMs.every((at, index) => index === 0 || at > (utcMs[index - 1] as number))).toBe(true);
+    }),
+    { numRuns: cases },
+  );
+}, 120_000);
