@@ -3,6 +3,7 @@ import { addressOf, useLab } from '@/components/api';
 import { DownloadLink } from '@/components/runs/download-link';
 import { Label } from '@/components/ui';
 import { exportSamplesCsv, exportSamplesNdjson, type ChannelView } from '@/shared/contracts/data';
+import { unitSign } from '@/shared/lib/format-number';
 
 export interface Span {
   fromUtcMs: number;
@@ -20,18 +21,24 @@ export function ExportLinks({ channel, whole, shown }: { channel: ChannelView; w
   return (
     <View className="gap-1" testID="export">
       <View className="flex-row flex-wrap gap-3">
-        <DownloadLink framed label="CSV" address={addressOf(exportSamplesCsv, asked)} fileName={`${channel.name}.csv`} testID="export-csv" />
         <DownloadLink
           framed
-          label="JSON lines"
+          label="Export CSV"
+          address={addressOf(exportSamplesCsv, asked)}
+          fileName={`${channel.name}.csv`}
+          testID="export-csv"
+        />
+        <DownloadLink
+          framed
+          label="Export JSON lines"
           address={addressOf(exportSamplesNdjson, asked)}
           fileName={`${channel.name}.ndjson`}
           testID="export-ndjson"
         />
       </View>
       <Label>
-        {shown === null ? 'Every sample of the run' : 'Every sample of the stretch shown'}, thinned by nothing; times in UTC, values in{' '}
-        {channel.unit} that read back to the same number.
+        {shown === null ? 'Every sample of the run' : 'Every sample of the stretch shown'}, none left out: times in UTC to the microsecond,
+        values in {unitSign(channel.unit)} that read back to the same number.
       </Label>
     </View>
   );

@@ -5,9 +5,9 @@ import type { MappingKey, RememberedMapping } from './remembered-mapping';
 /** An import as the person fills it in: nothing typed is lost by an error or a new answer. Pure. */
 
 /** Null: the file does not tell and the person has not said it yet. */
-export type MappingDraft = { [K in Exclude<keyof ImportMapping, 'elapsedFrom' | 'timesWithoutZoneAreUtc' | 'timeZone' | 'encoding'>]:
-  | ImportMapping[K]
-  | null } & {
+export type MappingDraft = {
+  [K in Exclude<keyof ImportMapping, 'elapsedFrom' | 'timesWithoutZoneAreUtc' | 'timeZone' | 'encoding'>]: ImportMapping[K] | null;
+} & {
   encoding: NonNullable<ImportMapping['encoding']>;
   elapsedFrom: string;
   /** The zone of times that name none, `UTC` or an IANA name; null while the file has such times and nobody has said so; empty where they are refused. */

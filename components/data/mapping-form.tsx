@@ -128,7 +128,10 @@ export function MappingForm({ draft, ambiguous, names, runStart, timeZone, onCha
   const columns = names.map((name, index) => ({ value: String(index), label: `${index + 1}: ${name}` }));
   const column = (index: number | null) => (index === null ? null : String(index));
   const open = (key: MappingKey) => ambiguous.includes(key);
-  const signs = delimiters.some(({ value }) => value === draft.delimiter) || draft.delimiter === null ? delimiters : [...delimiters, { value: draft.delimiter, label: draft.delimiter }];
+  const signs =
+    delimiters.some(({ value }) => value === draft.delimiter) || draft.delimiter === null
+      ? delimiters
+      : [...delimiters, { value: draft.delimiter, label: draft.delimiter }];
   return (
     <View className="gap-4 wide:flex-row wide:flex-wrap" testID="mapping-form">
       {draft.encoding === 'utf-8' ? null : (

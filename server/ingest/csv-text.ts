@@ -35,7 +35,6 @@ export function readHead(head: Uint8Array, whole: boolean): { text: string; enco
   if (head.length === 0) throw new UnreadableFile('The file is empty.');
   const encoding = markOf(head) ?? withoutMark(head);
   const text = decoded(head, encoding, whole) ?? (encoding === 'utf-8' ? decoded(head, 'latin-1', whole) : null);
-  // eslint-disable-next-line no-control-regex
   if (text === null || /[\u0000-\u0008\u000e-\u001f]/.test(text))
     throw new UnreadableFile('The file is not text: it holds control codes. A spreadsheet must be saved as CSV first.');
   return { text, encoding: decoded(head, encoding, whole) === null ? 'latin-1' : encoding };

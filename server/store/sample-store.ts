@@ -162,8 +162,8 @@ async function* pagesOf(
   { fromUtcMs, toUtcMs }: { fromUtcMs: number; toUtcMs: number },
 ): AsyncGenerator<SampleBatch> {
   for (let from = fromUtcMs; from <= toUtcMs;) {
-    const window = { fromUtcMs: from, toUtcMs };
-    const page = await connection.bulk((client) => readSamples(client, channel, window, samplesAPage));
+    const window = { fromUtcMs: from, toUtcMs, most: samplesAPage };
+    const page = await connection.bulk((client) => readSamples(client, channel, window));
     if (page.utcMs.length > 0) yield page;
     if (page.utcMs.length < samplesAPage) return;
     from = (microsecondsOf(page.utcMs.at(-1) as number) + 1) / 1000;
@@ -174,15 +174,14 @@ async function* pagesOf(
 async function readSamples(
   client: PoolClient,
   { labId, channelId }: ChannelKey,
-  window: { fromUtcMs: number; toUtcMs: number },
-  most: number | null = null,
+  window: { fromUtcMs: number; toUtcMs: number; most?: number },
 ): Promise<SampleBatch> {
   if (!isKey(labId) || !isKey(channelId)) return { utcMs: new Float64Array(), value: new Float64Array() };
   // COPY takes no parameters: both ids have the form of a UUID (just checked) and the instants are whole microseconds.
   const between = `at between ${instantSql(window.fromUtcMs)} and ${instantSql(window.toUtcMs)}`;
   const stream = client.query(
     copyTo(
-      `copy (select at, value from samples where lab_id = '${labId}' and channel_id = '${channelId}' and ${between} order by at limit ${String(most ?? 'all')}) to stdout (format binary)`,
+      `copy (select at, value from samples where lab_id = '${labId}' and channel_id = '${channelId}' and ${between} order by at limit ${String(window.most ?? 'all')}) to stdout (format binary)`,
     ),
   );
   return decodeSamples(stream);

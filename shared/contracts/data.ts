@@ -20,7 +20,9 @@ export const importMappingSchema = z.strictObject({
   /** UTF-8 where nothing is said. A byte order mark counts for more. */
   encoding: z.enum(['utf-8', 'utf-16le', 'utf-16be', 'latin-1']).optional(),
   /** One sign that is no part of a number, a name or a time. */
-  delimiter: z.string().regex(/^[^\p{L}\p{N}"'+.\-:#\r\n\u0000]$/u, 'one sign such as , ; | or a tab, no letter, digit, quotation mark or sign of a number'),
+  delimiter: z
+    .string()
+    .regex(/^[^\p{L}\p{N}"'+.\-:#\r\n\u0000]$/u, 'one sign such as , ; | or a tab, no letter, digit, quotation mark or sign of a number'),
   decimal: z.enum(['.', ',']),
   headerRow: z.boolean(),
   timeColumn: z.number().int().nonnegative(),

@@ -21,7 +21,14 @@ export interface RouteContract {
   readonly response?: z.ZodType;
   readonly status: 200 | 201 | 202 | 204;
   /** Media type of a reply or request that is not JSON. */
-  readonly produces?: 'text/event-stream' | 'text/calendar' | 'text/csv' | 'application/x-ndjson' | 'application/zip' | 'application/pdf' | 'application/json';
+  readonly produces?:
+    | 'text/event-stream'
+    | 'text/calendar'
+    | 'text/csv'
+    | 'application/x-ndjson'
+    | 'application/zip'
+    | 'application/pdf'
+    | 'application/json';
   readonly consumes?: 'text/csv' | 'application/x-ndjson';
   /** While the database is away it is answered out of the memory of the server that drives the runs, as far as that goes. */
   readonly fromMemory?: true;

@@ -170,7 +170,12 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     expect(value).toHaveLength(night.length);
     expect(utcMs).toEqual(night.map((sample) => sample.utcMs));
     expect(Math.max(...night.map(({ rad }, index) => Math.abs(rad * 1e6 - value[index])))).toBeLessThan(6e-4);
-    expect(exported.split('\n').slice(1, -1).map((line) => Number(line.split(',')[1]))).toEqual(value);
+    expect(
+      exported
+        .split('\n')
+        .slice(1, -1)
+        .map((line) => Number(line.split(',')[1])),
+    ).toEqual(value);
   });
 
   chapter('the same file again adds nothing', async () => {

@@ -20,7 +20,10 @@ interface Format {
 }
 
 /** Streams a window of a channel. What has been sent cannot be taken back: a failure in its midst breaks the download off, which the browser tells. */
-async function sendSamples({ params, membership, services, query, res }: Export, formatOf: (channel: ChannelRecord) => Format): Promise<undefined> {
+async function sendSamples(
+  { params, membership, services, query, res }: Export,
+  formatOf: (channel: ChannelRecord) => Format,
+): Promise<undefined> {
   const { labId } = membership;
   const channel = await findChannel(services.database.db, labId, params.channelId);
   if (channel === null) throw notFound('channel');

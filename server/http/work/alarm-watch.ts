@@ -169,7 +169,10 @@ export class AlarmWatch {
     const known = await this.knownOf(rig.labId, rig.id);
     const utcMs = services.clock.utcMs();
     const limits = await limitsOfRig(db, rig.labId, rig.id);
-    const slow = await limitConditions(services.database, limits, { utcMs, isMet: (code, subject) => known.met?.has(keyOf({ code, subject })) === true });
+    const slow = await limitConditions(services.database, limits, {
+      utcMs,
+      isMet: (code, subject) => known.met?.has(keyOf({ code, subject })) === true,
+    });
     const driver = services.supervisor.activeOf(rig.id);
     if (driver !== null && !driver.isOver()) {
       const facts = driver.facts();

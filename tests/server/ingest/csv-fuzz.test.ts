@@ -23,7 +23,10 @@ const time = fc.oneof(
     ...['2031-03-14T22:00:00+99:99', '2031-03-14T22:00:00,5', 'Z'],
   ),
 );
-const noise = fc.string({ unit: fc.constantFrom(',', ';', '"', "'", '\n', '\r', '\t', '\u0000', '\ufeff', '#', 'é', '𝛼', ' ', '1', '-', '.'), maxLength: 12 });
+const noise = fc.string({
+  unit: fc.constantFrom(',', ';', '"', "'", '\n', '\r', '\t', '\u0000', '\ufeff', '#', 'é', '𝛼', ' ', '1', '-', '.'),
+  maxLength: 12,
+});
 const field = fc.oneof({ weight: 4, arbitrary: number }, { weight: 4, arbitrary: time }, { weight: 1, arbitrary: noise });
 const quoted = field.chain((text) => fc.constantFrom(text, `"${text}"`, `"${text}`, `"${text.replaceAll('"', '""')}"`));
 const text = fc
