@@ -168,8 +168,7 @@ export class AlarmWatch {
     const { db } = services.database;
     const known = await this.knownOf(rig.labId, rig.id);
     const utcMs = services.clock.utcMs();
-    const limits = await limitsOfRig(db, rig.labId, rig.id);
-    const slow = await limitConditions(services.database, limits, {
+    const slow = await limitConditions(services.database, await limitsOfRig(db, rig.labId, rig.id), {
       utcMs,
       isMet: (code, subject) => known.met?.has(keyOf({ code, subject })) === true,
     });
