@@ -15,6 +15,8 @@ export interface CallInput<R extends RouteContract> {
   /** The same key for every attempt at the same act; made here when absent. */
   idempotencyKey?: string | undefined;
   signal?: AbortSignal | undefined;
+  /** The token of a device, for routes that devices call. */
+  deviceToken?: string;
   /** Lets the request outlive the page: for hold and stop. */
   keepalive?: boolean;
 }
@@ -45,6 +47,7 @@ function headersOf<R extends RouteContract>(route: R, input: CallInput<R>): Head
   const headers = new Headers({ accept: route.produces ?? 'application/json, application/problem+json' });
   if (input.raw !== undefined) headers.set('content-type', route.consumes ?? 'application/octet-stream');
   else if (input.body !== undefined) headers.set('content-type', 'application/json');
+  if (input.deviceToken !== undefined) headers.set('authorization', `Bearer ${input.deviceToken}`);
   if (input.ifMatch !== undefined) headers.set('if-match', input.ifMatch);
   if (route.idempotent === true) headers.set('idempotency-key', input.idempotencyKey ?? newIdempotencyKey());
   return headers;

@@ -2,6 +2,9 @@
 
 export const deviceNowMs = (): number => Date.now();
 
+/** Time of this page that nobody sets, ms: what the browser stamps pictures of a camera with. */
+export const monotonicMs = (): number => performance.now();
+
 export interface ClockOffset {
   /** Server minus phone, ms. */
   offsetMs: number;

@@ -1,4 +1,5 @@
 import { useQueryClient } from '@tanstack/react-query';
+import { useRouter, type Href } from 'expo-router';
 import { useState } from 'react';
 import { View } from 'react-native';
 import { labKey, serverNowMs, useLab, useLabMutation, useLabQuery, useMay, wordsOf } from '@/components/api';
@@ -18,6 +19,7 @@ type Devices = ResponseOf<typeof listDevices>;
 export function DevicesPanel({ rig }: { rig: RigView }) {
   const { labId } = useLab();
   const queries = useQueryClient();
+  const router = useRouter();
   const mayManage = useMay('tokens.manage').ok;
   const devices = useLabQuery(listDevices, { params: { rigId: rig.id }, everyMs: 10_000 });
   const refresh = () => void queries.invalidateQueries({ queryKey: labKey(labId, listDevices) });
@@ -40,6 +42,12 @@ export function DevicesPanel({ rig }: { rig: RigView }) {
         {mayManage ? (
           <Button icon="plus" label="Add a device" className="self-start" onPress={() => setMaking(true)} testID="add-device" />
         ) : null}
+        <Button
+          label="Read the light spot with this device"
+          className="self-start"
+          onPress={() => router.push(`/rigs/${rig.id}/light-spot` as Href)}
+          testID="to-light-spot"
+        />
       </Panel>
       {making ? (
         <DeviceSheet

@@ -24,3 +24,4 @@ export { RunScreen } from '@/components/runs/run-screen';
 export { RunningBar } from '@/components/runs/running-bar';
 export { RunsScreen } from '@/components/runs/runs-screen';
 export { StepLogScreen } from '@/components/runs/step-log-screen';
+export { SpotScreen } from '@/components/spot/spot-screen';

@@ -1,0 +1,109 @@
+import { useEffect, useState } from 'react';
+import { View } from 'react-native';
+import { useLab } from '@/components/api';
+import { Body, Button, Icon, Label, Panel, ProblemNotice, Section, Select } from '@/components/ui';
+import { formatClock } from '@/shared/lib/format-time';
+import { usualRegion } from '@/shared/spot/setting';
+import { browserCamera } from './camera';
+import { PictureView } from './picture-view';
+import type { CameraState } from './spot-reader';
+import type { SpotPage } from './use-spot-reader';
+
+/** The camera and its picture; the region is drawn in it. */
+export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: number | null; onLine: (px: number) => void }) {
+  const { reader, view, setting, change, place } = page;
+  const cameras = useCameras(view.camera.kind);
+  const { picture, spot } = view;
+  const isOpen = view.camera.kind === 'open' || view.camera.kind === 'lost';
+  const chosen = view.camera.kind === 'open' ? view.camera.id : (setting.cameraId ?? '');
+  useEffect(() => {
+    if (picture !== null && setting.region === null) change({ region: usualRegion(picture), picture });
+  });
+  const marksFit = setting.picture === null || (setting.picture.width === picture?.width && setting.picture.height === picture.height);
+  const open = (id: string | null) => {
+    change({ cameraId: id });
+    void reader.openCamera(id);
+  };
+  return (
+    <Section title="Camera">
+      <CameraNotice camera={view.camera} />
+      <PictureView
+        place={place}
+        open={isOpen || view.camera.kind === 'opening'}
+        picture={isOpen ? picture : null}
+        region={setting.region}
+        spotPx={spot?.px ?? null}
+        linePx={linePx}
+        onRegion={(region) => change({ region, picture, ...(marksFit ? {} : { marks: [] }) })}
+        onLine={onLine}
+      />
+      <View className="flex-row flex-wrap items-end gap-3">
+        {cameras.length === 0 || !isOpen ? null : (
+          <View className="min-w-[220px] flex-1">
+            <Select
+              label="Camera"
+              value={chosen}
+              options={cameras.map(({ id, name }) => ({ value: id, label: name }))}
+              onChange={open}
+              testID="spot-camera"
+            />
+          </View>
+        )}
+        {isOpen ? (
+          <Button label="Close the camera" disabled={view.sending} onPress={() => reader.closeCamera()} testID="close-camera" />
+        ) : (
+          <Button
+            kind="primary"
+            label="Open the camera"
+            busy={view.camera.kind === 'opening'}
+            onPress={() => open(setting.cameraId)}
+            testID="open-camera"
+          />
+        )}
+      </View>
+      {view.camera.kind === 'open' && view.camera.free.length > 0 ? (
+        <Label>
+          The camera goes on setting by itself: {view.camera.free.join(', ')}. Set it by hand in its own program: each change moves the spot or
+          its brightness.
+        </Label>
+      ) : null}
+    </Section>
+  );
+}
+
+function CameraNotice({ camera }: { camera: CameraState }) {
+  const { timeZone } = useLab();
+  if (camera.kind === 'refused') return <ProblemNotice title="The camera was not opened" detail={camera.why} />;
+  if (camera.kind !== 'lost') return null;
+  return (
+    <Panel edge="danger" testID="camera-lost">
+      <View role="alert" className="flex-row gap-2">
+        <Icon name="warning" tone="danger" />
+        <Body className="flex-1">
+          The camera is away since {formatClock(camera.sinceUtcMs, { timeZone, precision: 'seconds' })}. {camera.why} It is looked for every 3 s, and nothing is stored
+          meanwhile; what was read until then is sent.
+        </Body>
+      </View>
+    </Panel>
+  );
+}
+
+/** The cameras of this device, looked for anew whenever one comes or goes. */
+function useCameras(state: CameraState['kind']): { id: string; name: string }[] {
+  const [cameras, setCameras] = useState<{ id: string; name: string }[]>([]);
+  useEffect(() => {
+    let live = true;
+    const look = () =>
+      void browserCamera(() => null)
+        .list()
+        .then((found) => (live ? setCameras(found) : undefined));
+    look();
+    const media = (navigator as { mediaDevices?: MediaDevices }).mediaDevices;
+    media?.addEventListener('devicechange', look);
+    return () => {
+      live = false;
+      media?.removeEventListener('devicechange', look);
+    };
+  }, [state]);
+  return cameras;
+}

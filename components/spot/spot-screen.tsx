@@ -1,0 +1,87 @@
+import { useLocalSearchParams, type Href } from 'expo-router';
+import { useState } from 'react';
+import { View } from 'react-native';
+import { Body, Button, Screen } from '@/components/ui';
+import { useRig } from '@/components/rigs/use-rig';
+import { fitScale } from '@/shared/spot/scale';
+import { regionFault } from '@/shared/spot/setting';
+import { BlackScreen } from './black-screen';
+import { CameraPanel } from './camera-panel';
+import { LivePanel } from './live-panel';
+import { ReadingPanel } from './reading-panel';
+import { ScalePanel } from './scale-panel';
+import { TargetPanel } from './target-panel';
+import { useSpotReader, type SpotPage } from './use-spot-reader';
+
+/** Reads the light spot on the scale with a camera of this device, all night, into a channel of the rig. */
+export function SpotScreen() {
+  const { rigId } = useLocalSearchParams<{ rigId: string }>();
+  const rig = useRig(rigId).data?.data;
+  const page = useSpotReader(rigId);
+  const [linePx, setLinePx] = useState<number | null>(null);
+  const [black, setBlack] = useState(false);
+  return (
+    <Screen
+      title="Read the light spot"
+      back={{ href: `/rigs/${rigId}` as Href, label: rig?.name ?? 'the rig' }}
+      testID="spot-screen"
+      footer={<Acts page={page} onBlack={() => setBlack(true)} />}
+      footerGivesWay
+      aside={
+        <>
+          <ReadingPanel page={page} />
+          <ScalePanel page={page} linePx={linePx} />
+          <TargetPanel page={page} rigId={rigId} />
+        </>
+      }
+    >
+      <CameraPanel page={page} linePx={linePx} onLine={setLinePx} />
+      <LivePanel view={page.view} />
+      {black ? <BlackScreen view={page.view} onClose={() => setBlack(false)} /> : null}
+    </Screen>
+  );
+}
+
+/** What still has to be done before samples can be kept. */
+function stillToDo({ view, setting }: SpotPage): string[] {
+  const { picture } = view;
+  const sameSize = picture === null || setting.picture === null || (picture.width === setting.picture.width && picture.height === setting.picture.height);
+  return [
+    view.camera.kind === 'open' ? null : 'open the camera',
+    sameSize ? null : 'draw the region and mark the scale anew, because the picture has another size than before',
+    setting.region !== null && picture !== null && regionFault(setting.region, picture) !== null ? 'draw the region within the picture' : null,
+    fitScale(setting.marks, setting.uMarkMm) === null ? 'mark two places of the scale' : null,
+    setting.channel === '' ? 'choose the channel' : null,
+    setting.token.trim() === '' ? 'give the token of the device' : null,
+  ].filter((one) => one !== null);
+}
+
+function Acts({ page, onBlack }: { page: SpotPage; onBlack: () => void }) {
+  const { view, reader } = page;
+  const missing = stillToDo(page);
+  return (
+    <View className="gap-2">
+      {view.sending || missing.length === 0 ? null : (
+        <Body tone="dim" size={13} testID="spot-missing">
+          Still to do: {missing.join('; ')}.
+        </Body>
+      )}
+      <View className="flex-row gap-3">
+        {view.sending ? (
+          <Button size="action" label="End the reading" className="flex-1" onPress={() => reader.end()} testID="end-reading" />
+        ) : (
+          <Button
+            kind="primary"
+            size="action"
+            label="Begin to read"
+            className="flex-1"
+            disabled={missing.length > 0}
+            onPress={() => reader.begin()}
+            testID="begin-reading"
+          />
+        )}
+        <Button size="action" label="Black screen" className="flex-1" onPress={onBlack} testID="go-black" />
+      </View>
+    </View>
+  );
+}

@@ -1,0 +1,112 @@
+import { useEffect, useState } from 'react';
+import { call, deviceNowMs, monotonicMs } from '@/components/api';
+import { appendSamples } from '@/shared/contracts/devices';
+import { getHealth } from '@/shared/contracts/service';
+import { fitScale } from '@/shared/spot/scale';
+import type { SpotSetting } from '@/shared/spot/setting';
+import { browserCamera } from './camera';
+import { watchDevice } from './device-watch';
+import { keepSetting, readSetting } from './kept-setting';
+import { SpotReader, type ReaderView, type SpotPlan } from './spot-reader';
+import { SpotSender } from './spot-sender';
+
+/** Where the camera's pictures are shown. */
+export class VideoPlace {
+  element: HTMLVideoElement | null = null;
+  readonly set = (element: HTMLVideoElement | null): void => {
+    this.element = element;
+  };
+}
+
+export interface SpotPage {
+  place: VideoPlace;
+  reader: SpotReader;
+  view: ReaderView;
+  setting: SpotSetting;
+  change(part: Partial<SpotSetting>): void;
+}
+
+/** How often the reader is stepped and the page drawn, ms; no answer to a batch within `answerMs` is none. */
+const stepMs = 250;
+const answerMs = 15_000;
+
+const planOf = ({ region, of, light, marks, uMarkMm, picture, channel, token }: SpotSetting): SpotPlan => ({
+  region,
+  of,
+  light,
+  picture,
+  scale: fitScale(marks, uMarkMm),
+  target: { channel, token: token.trim() },
+});
+
+const sendBatch = async ({ token }: { token: string }, lines: string): Promise<void> => {
+  const abort = new AbortController();
+  const timer = setTimeout(() => abort.abort(), answerMs);
+  try {
+    await call(appendSamples, { raw: lines, deviceToken: token, signal: abort.signal });
+  } finally {
+    clearTimeout(timer);
+  }
+};
+
+async function askTime() {
+  const sentMs = monotonicMs();
+  const { data } = await call(getHealth);
+  return { sentMs, receivedMs: monotonicMs(), serverMs: Date.parse(data.serverAt) };
+}
+
+function makeReader(setting: SpotSetting) {
+  const place = new VideoPlace();
+  const device = watchDevice();
+  const reader = new SpotReader(
+    {
+      camera: browserCamera(() => place.element),
+      device,
+      sender: new SpotSender({ send: sendBatch, nowMs: monotonicMs }),
+      askTime,
+      nowMs: monotonicMs,
+      deviceUtcMs: deviceNowMs,
+    },
+    planOf(setting),
+  );
+  const end = () => {
+    reader.closeCamera();
+    device.end();
+  };
+  return { place, reader, end };
+}
+
+/** The reader of a rig with its setting, which the device remembers. It lives as long as the page. */
+export function useSpotReader(rigId: string): SpotPage {
+  const [setting, setSetting] = useState(() => readSetting(rigId));
+  const [{ place, reader, end }] = useState(() => makeReader(setting));
+  const [view, setView] = useState(() => reader.view());
+  useEffect(() => {
+    const timer = setInterval(() => {
+      void reader.step();
+      setView(reader.view());
+    }, stepMs);
+    return () => {
+      clearInterval(timer);
+      end();
+    };
+  }, [reader, end]);
+  useStaysOpen(view.sending || view.sender.buffer.held > 0);
+  const change = (part: Partial<SpotSetting>) => {
+    const next = { ...setting, ...part };
+    setSetting(next);
+    reader.use(planOf(next));
+    keepSetting(rigId, next);
+  };
+  return { place, reader, view, setting, change };
+}
+
+/** The browser asks before it closes the page. */
+function useStaysOpen(wanted: boolean): void {
+  useEffect(() => {
+    if (!wanted) return undefined;
+    const ask = (event: BeforeUnloadEvent) => event.preventDefault();
+    window.addEventListener('beforeunload', ask);
+    return () => window.removeEventListener('beforeunload', ask);
+  }, [wanted]);
+}
