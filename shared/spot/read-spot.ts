@@ -27,6 +27,8 @@ export type SpotReading =
 const LEAST_SIGNAL = { deviations: 5, level: 0.2 };
 /** Half of the window in standard deviations of a Gaussian spot of this width: what lies beyond shifts the centroid by less than 1e-3 px. */
 const HALF_WINDOW = 4;
+/** Half of the rows that are summed up, likewise. */
+const HALF_HEIGHT = 2.5;
 /** Full width at half height of a Gaussian in its standard deviations, 2 √(2 ln 2). */
 const WIDTH_OF_SIGMA = 2.354820045;
 /** Fewest columns of a region in which a spot can be found at all. */
@@ -89,7 +91,7 @@ function rowsOfSpot({ width, height, values }: Intensities, rough: Rough): { fro
   const { left, right } = widthAt(soft.map((value) => value - least));
   const sigma = (right - left) / WIDTH_OF_SIGMA;
   const middle = (left + right) / 2;
-  const reach = HALF_WINDOW * sigma + 1;
+  const reach = HALF_HEIGHT * sigma + 1;
   const from = Math.max(0, Math.floor(middle - reach));
   return { from, to: Math.max(Math.min(height, Math.ceil(middle + reach) + 1), from + 1) };
 }
@@ -104,52 +106,81 @@ interface Window {
   to: number;
 }
 
+/**
+ * The place about which the light is balanced, each column counting by a Gaussian about that place: Σ (x − c) w(x − c) net(x) = 0. The plain
+ * centroid would count the noise far from the spot most. For a spot that is symmetric both are its middle.
+ */
 function centroid(profile: Profile, rough: Rough, half: number): SpotReading {
   const { mean } = profile;
-  let centre = Math.round((rough.left + rough.right) / 2);
-  for (let round = 0; ; round += 1) {
-    const window = { from: centre - half, to: centre + half };
-    if (window.from < 0 || window.to >= mean.length) return none('at-border');
-    const line = backgroundOf(mean, outside(window));
-    if (line === null) return none('too-wide');
-    let light = 0;
-    let moment = 0;
-    for (let x = window.from; x <= window.to; x += 1) {
-      const net = (mean[x] as number) - line.at(x);
-      light += net;
-      moment += net * (x - centre);
-    }
-    if (!(light > 0)) return none('dark');
-    const px = centre + moment / light;
-    const next = Math.round(px);
-    if (next === centre || round === 8)
-      return {
-        kind: 'spot',
-        px,
-        uPx: Math.sqrt(varianceOf(profile, centroidWeights(mean.length, { window, line, px, light }))),
-        widthPx: rough.right - rough.left,
-        second: hasSecond(mean, { window, line, level: (mean[rough.peak] as number) - line.at(rough.peak) }),
-      };
-    centre = next;
+  const middle = Math.round((rough.left + rough.right) / 2);
+  const window = { from: middle - half, to: middle + half };
+  if (window.from < 0 || window.to >= mean.length) return none('at-border');
+  const line = backgroundOf(mean, outside(window));
+  if (line === null) return none('too-wide');
+  const sigma = WEIGHT_SIGMA * rough.sigma;
+  let px = middle;
+  for (let round = 0; round < MOST_ROUNDS; round += 1) {
+    const { balance, slope } = balanceAt(px, { mean, window, line, sigma });
+    const step = balance / slope;
+    if (!(slope > 0) || !(Math.abs(px + step - middle) <= half)) return none('dark');
+    px += step;
+    if (Math.abs(step) > CLOSE_PX) continue;
+    return {
+      kind: 'spot',
+      px,
+      uPx: Math.sqrt(varianceOf(profile, centroidWeights(px, { mean, window, line, sigma }))),
+      widthPx: rough.right - rough.left,
+      second: hasSecond(mean, { window, line, level: (mean[rough.peak] as number) - line.at(rough.peak) }),
+    };
   }
+  return none('dark');
 }
 
-/** How much the centroid moves with each column: those of the window directly, the others by the background they carry. */
-function centroidWeights(length: number, at: { window: Window; line: Background; px: number; light: number }): Float64Array {
-  const { window, line, px, light } = at;
+/** Width of the weights in standard deviations of the spot; least noise at 1, less sensitive to the width at more. */
+const WEIGHT_SIGMA = 1.2;
+const CLOSE_PX = 1e-6;
+const MOST_ROUNDS = 30;
+
+interface Balanced {
+  mean: Float64Array;
+  window: Window;
+  line: Background;
+  sigma: number;
+}
+
+const weightAt = (distance: number, sigma: number) => Math.exp(-0.5 * (distance / sigma) ** 2);
+
+/** How far the light is out of balance about a place, and how fast that falls when the place moves. */
+function balanceAt(px: number, { mean, window, line, sigma }: Balanced): { balance: number; slope: number } {
+  let balance = 0;
+  let slope = 0;
+  for (let x = window.from; x <= window.to; x += 1) {
+    const d = x - px;
+    const light = weightAt(d, sigma) * ((mean[x] as number) - line.at(x));
+    balance += d * light;
+    slope += light * (1 - (d / sigma) ** 2);
+  }
+  return { balance, slope };
+}
+
+/** How much the place moves with each column: those of the window directly, the others by the background they carry. */
+function centroidWeights(px: number, at: Balanced): Float64Array {
+  const { mean, window, line, sigma } = at;
+  const { slope } = balanceAt(px, at);
   const beside = outside(window);
-  // The background enters as Σ (x − px) b(x), and b is a straight line: its weights at two places are enough.
+  // The background is a straight line: its weights at two places are enough.
   let zeroth = 0;
   let first = 0;
   for (let x = window.from; x <= window.to; x += 1) {
-    zeroth += x - px;
-    first += (x - px) * x;
+    const part = (x - px) * weightAt(x - px, sigma);
+    zeroth += part;
+    first += part * x;
   }
-  return Float64Array.from({ length }, (_, i) => {
-    const own = i >= window.from && i <= window.to ? i - px : 0;
-    if (!beside(i)) return own / light;
+  return Float64Array.from({ length: mean.length }, (_, i) => {
+    const own = i >= window.from && i <= window.to ? (i - px) * weightAt(i - px, sigma) : 0;
+    if (!beside(i)) return own / slope;
     const at0 = line.weight(i, 0);
-    return (own - zeroth * at0 - first * (line.weight(i, 1) - at0)) / light;
+    return (own - zeroth * at0 - first * (line.weight(i, 1) - at0)) / slope;
   });
 }
 
