@@ -36,12 +36,19 @@ function contentSecurityPolicy(pages: readonly string[]): Record<string, string[
   };
 }
 
+/** The light-spot reader uses a camera; nothing of ours uses the rest, and no page in a frame may use any. */
+const permissions = 'camera=(self), microphone=(), geolocation=(), display-capture=()';
+
 export function securityHeaders(config: ServerConfig, pages: readonly string[]): RequestHandler {
   const overTls = config.publicUrl?.startsWith('https:') ?? false;
-  return helmet({
+  const others = helmet({
     contentSecurityPolicy: { useDefaults: false, directives: contentSecurityPolicy(pages) },
     strictTransportSecurity: overTls ? { maxAge: 31_536_000, includeSubDomains: false } : false,
     referrerPolicy: { policy: 'no-referrer' },
     crossOriginEmbedderPolicy: false,
   });
+  return (req, res, next) => {
+    res.setHeader('Permissions-Policy', permissions);
+    others(req, res, next);
+  };
 }

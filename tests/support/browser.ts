@@ -21,8 +21,14 @@ const flags = [
   '--disable-background-networking',
   '--disable-component-update',
   '--disable-sync',
-  // Pages live for seconds: neither compiling their program with much care nor collecting their garbage often gives back what it costs.
-  '--js-flags=--no-maglev,--no-opt,--always-sparkplug,--min-semi-space-size=32',
+];
+/** Pages live for seconds: neither compiling their program with much care nor collecting their garbage often gives back what it costs. */
+const quickProgram = '--js-flags=--no-maglev,--no-opt,--always-sparkplug,--min-semi-space-size=32';
+/** A camera that shows a film, and a browser that lets every page use it. A page that reads pictures is worth compiling. */
+const cameraFlags = (film: string) => [
+  '--use-fake-device-for-media-stream',
+  '--use-fake-ui-for-media-stream',
+  `--use-file-for-fake-video-capture=${film}`,
 ];
 
 export interface Browser {
@@ -43,11 +49,18 @@ const idle: Idle[] = [];
 /** How long a browser waits for its next user before it ends, ms. */
 const idleMs = 20_000;
 
-async function launch(baseURL: string, size: Size, installs: boolean): Promise<BrowserContext> {
+export interface BrowserOptions {
+  /** It may keep the built program, is really new and really ends. */
+  installs?: boolean;
+  /** The film (YUV4MPEG2) that its camera shows over and over; such a browser is really new and really ends. */
+  film?: string;
+}
+
+async function launch(baseURL: string, size: Size, { installs = false, film }: BrowserOptions): Promise<BrowserContext> {
   const context = await chromium.launchPersistentContext('', {
     executablePath: '/usr/bin/chromium-headless-shell',
     headless: true,
-    args: flags,
+    args: [...flags, ...(film === undefined ? [quickProgram] : cameraFlags(film))],
     baseURL,
     viewport: sizes[size],
     acceptDownloads: true,
@@ -87,12 +100,12 @@ async function closeIfIdle(one: Idle): Promise<void> {
 
 /**
  * Debian's Chromium at one of the two sizes, as somebody has it who was never here. To start one and to read the program for the first time
- * costs more than most tests, so one that is closed is cleared and used again for the same address and size. `installs`: it may keep the
- * built program, is really new and really ends.
+ * costs more than most tests, so one that is closed is cleared and used again for the same address and size.
  */
-export async function openBrowser(baseURL: string, size: Size, installs = false): Promise<Browser> {
+export async function openBrowser(baseURL: string, size: Size, options: BrowserOptions = {}): Promise<Browser> {
   const key = `${size} ${baseURL}`;
-  const { context, page } = await blankPage(baseURL, installs ? '' : key, () => launch(baseURL, size, installs));
+  const ends = options.installs === true || options.film !== undefined;
+  const { context, page } = await blankPage(baseURL, ends ? '' : key, () => launch(baseURL, size, options));
   page.setDefaultTimeout(30_000);
   const errors: string[] = [];
   page.on('pageerror', (error) => errors.push(String(error)));
@@ -105,7 +118,7 @@ export async function openBrowser(baseURL: string, size: Size, installs = false)
     size,
     errors,
     close: async () => {
-      if (installs) return context.close();
+      if (ends) return context.close();
       await page.close();
       const one = { key, context };
       idle.push(one);

@@ -8,7 +8,7 @@ import { sha256Hex } from '@/server/evaluation/sha256';
 import { startDemoMailbox, type DemoMailbox } from '@/server/notify/demo-mailbox';
 import { createSmtpMail } from '@/server/notify/smtp-mail';
 import type { Role } from '@/shared/contracts/roles';
-import { openBrowser, type Browser, type Size } from '../../support/browser';
+import { openBrowser, type Browser, type BrowserOptions, type Size } from '../../support/browser';
 import { freshDatabase, type TestDatabase } from '../../support/database';
 import { LabServer, World } from '../../support/lab-server';
 import { listensAgain } from './one-address';
@@ -75,9 +75,9 @@ export class Lab {
     return () => this.letTimeFlow();
   }
 
-  /** A browser, signed in where a role is given; `address` is where a network of its own begins, `installs`: it keeps the built program. */
-  async open(size: Size, role?: Role, { address = this.address, installs = false } = {}): Promise<Browser> {
-    const browser = await openBrowser(address, size, installs);
+  /** A browser, signed in where a role is given; `address` is where a network of its own begins. */
+  async open(size: Size, role?: Role, { address = this.address, ...options }: BrowserOptions & { address?: string } = {}): Promise<Browser> {
+    const browser = await openBrowser(address, size, options);
     this.browsers.add(browser);
     if (role !== undefined) await this.enter(browser, role);
     return browser;

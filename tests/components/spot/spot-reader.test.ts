@@ -1,0 +1,193 @@
+import { ApiProblem, ApiUnreachable } from '@/components/api/problem';
+import { CameraRefused, type CameraEvents, type CameraFrame, type CameraPort } from '@/components/spot/camera';
+import { SpotReader, type SpotPlan } from '@/components/spot/spot-reader';
+import { SpotSender } from '@/components/spot/spot-sender';
+import { fitScale } from '@/shared/spot/scale';
+import { drawSpot, seeded, usualSpot } from '../../support/drawn-spot';
+
+/** The reader with a camera, a server and a time that are invented. */
+
+const startUtcMs = Date.UTC(2031, 1, 14, 20);
+const region = { left: 20, top: 10, width: usualSpot.width, height: usualSpot.height };
+const picture = { width: 320, height: 240 };
+const plan: SpotPlan = {
+  region,
+  of: 'centre',
+  light: 'all',
+  scale: fitScale([{ px: 20, mm: 0 }, { px: 120, mm: 50 }], 0.1),
+  picture,
+  target: { channel: 'light spot', token: 'a token of twenty letters' },
+};
+
+class World {
+  nowMs = 5000;
+  answers: 'yes' | 'away' | 'refuses' | 'revoked' = 'yes';
+  readonly batches: string[] = [];
+  readonly opened: (string | null)[] = [];
+  plugged = true;
+  awake = false;
+  events: CameraEvents | null = null;
+  private readonly drawn = new Map<number, Uint8ClampedArray>();
+
+  readonly camera: CameraPort = {
+    list: () => Promise.resolve([]),
+    open: (id, events) => {
+      this.opened.push(id);
+      if (!this.plugged) return Promise.reject(new CameraRefused('No camera is connected.'));
+      this.events = events;
+      return Promise.resolve({ id: 'eye 1', name: 'Eye', holdSettings: () => Promise.resolve(['focus']), close: () => void (this.events = null) });
+    },
+  };
+  readonly sender = new SpotSender({
+    nowMs: () => this.nowMs,
+    send: (_, lines) => {
+      if (this.answers === 'away') return Promise.reject(new ApiUnreachable());
+      if (this.answers !== 'yes') return Promise.reject(problem(this.answers === 'refuses' ? 'unreadable-data' : 'wrong-token'));
+      this.batches.push(lines);
+      return Promise.resolve();
+    },
+  });
+  readonly reader = new SpotReader(
+    {
+      camera: this.camera,
+      device: {
+        now: () => ({ awake: this.awake, battery: null, hidden: false }),
+        keepAwake: () => void (this.awake = true),
+        end: () => undefined,
+      },
+      sender: this.sender,
+      // The server is 1 h behind the device's own clock, which nobody set.
+      askTime: () => Promise.resolve({ sentMs: this.nowMs - 10, receivedMs: this.nowMs + 10, serverMs: startUtcMs + this.nowMs }),
+      nowMs: () => this.nowMs,
+      deviceUtcMs: () => startUtcMs + this.nowMs + 3_600_000,
+    },
+    plan,
+  );
+
+  /** Lets time pass, with `rateHz` pictures a second of a spot at column `x` of the picture. */
+  async watch(seconds: number, { x = 90, rateHz = 10, size = picture } = {}): Promise<void> {
+    for (let i = 0; i < seconds * rateHz; i += 1) {
+      this.nowMs += 1000 / rateHz;
+      this.events?.frame(this.frame(x, size));
+      await this.reader.step();
+    }
+  }
+
+  private frame(x: number, size: { width: number; height: number }): CameraFrame {
+    return {
+      capturedMs: this.nowMs - 30,
+      stamped: 'capture',
+      missed: 0,
+      ...size,
+      pixels: ({ left }) => this.pixels(x - left),
+    };
+  }
+
+  private pixels(x: number): Uint8ClampedArray {
+    const known = this.drawn.get(x);
+    if (known !== undefined) return known;
+    const { values } = drawSpot({ ...usualSpot, x }, seeded(17));
+    const pixels = Uint8ClampedArray.from({ length: 4 * values.length }, (_, i) => values[i >> 2] as number);
+    this.drawn.set(x, pixels);
+    return pixels;
+  }
+
+  get samples(): { channel: string; time_utc: string; value: number }[] {
+    return this.batches.flatMap((batch) => batch.split('\n').map((line) => JSON.parse(line)));
+  }
+}
+
+const problem = (code: 'unreadable-data' | 'wrong-token') =>
+  new ApiProblem({ type: `/problems/${code}`, title: code, status: 400, code, detail: `It is ${code}.` });
+
+async function reading(): Promise<World> {
+  const world = new World();
+  await world.reader.step();
+  await world.reader.openCamera(null);
+  world.reader.begin();
+  return world;
+}
+
+test('positions on the scale reach the server once each, with the moment the pictures were taken, by the server’s clock', async () => {
+  const world = await reading();
+  await world.watch(3);
+  world.reader.end();
+  await world.watch(2);
+  const { samples } = world;
+  expect(samples).toHaveLength(30);
+  expect(Date.parse(samples[0]?.time_utc ?? '')).toBe(startUtcMs + 5100 - 30);
+  expect(new Set(samples.map(({ time_utc: time }) => time)).size).toBe(30);
+  for (const { channel, value } of samples) {
+    expect(channel).toBe('light spot');
+    // Column 90 lies 70 columns of 0.5 mm from the first mark.
+    expect(Math.abs(value - 35)).toBeLessThan(0.06);
+  }
+  expect(world.reader.view()).toMatchObject({ sending: false, sender: { buffer: { stored: 30, held: 0 }, trouble: null }, gaps: [] });
+  expect(world.awake).toBe(true);
+  expect(world.reader.view().warnings.join()).toMatch(/clock of this device is .* ahead of the server's/);
+  expect(world.reader.view().camera).toMatchObject({ kind: 'open', free: ['focus'] });
+});
+
+test('while the server is away nothing is lost, and each sample is stored once when it is back', async () => {
+  const world = await reading();
+  await world.watch(2);
+  world.answers = 'away';
+  await world.watch(20);
+  expect(world.reader.view().sender.trouble).toBe('The server does not answer.');
+  expect(world.reader.view().sender.buffer.held).toBeGreaterThan(180);
+  world.answers = 'yes';
+  await world.watch(40);
+  expect(world.reader.view().sender.trouble).toBeNull();
+  const times = world.samples.map(({ time_utc: time }) => time);
+  expect(times).toEqual([...new Set(times)].sort());
+  expect(times.length + world.reader.view().sender.buffer.held).toBe(620);
+});
+
+test('a revoked token keeps what was read until another one is given; what is refused for good is told', async () => {
+  const world = await reading();
+  world.answers = 'revoked';
+  await world.watch(3);
+  expect(world.reader.view().sender).toMatchObject({ trouble: 'It is wrong-token.', buffer: { dropped: null } });
+  world.answers = 'refuses';
+  await world.watch(12);
+  expect(world.reader.view().sender).toMatchObject({ refused: 'It is unreadable-data.' });
+  expect(world.reader.view().sender.buffer.dropped?.count).toBeGreaterThan(0);
+});
+
+test('a camera unplugged in the night is told and looked for, the same one; the gap is told, nothing is stored of it', async () => {
+  const world = await reading();
+  await world.watch(2);
+  world.plugged = false;
+  world.events?.ended();
+  world.events = null;
+  await world.watch(10);
+  expect(world.reader.view()).toMatchObject({ camera: { kind: 'lost', why: 'No camera is connected.' }, spot: null, sending: true });
+  world.plugged = true;
+  await world.watch(5);
+  expect(world.reader.view().camera.kind).toBe('open');
+  expect(world.opened.length).toBeGreaterThan(3);
+  expect(new Set(world.opened.slice(1))).toEqual(new Set(['eye 1']));
+  const [gap] = world.reader.view().gaps;
+  expect((gap?.toUtcMs ?? 0) - (gap?.fromUtcMs ?? 0)).toBeGreaterThan(9000);
+  const inGap = world.samples.filter(({ time_utc: time }) => Date.parse(time) > (gap?.fromUtcMs ?? 0) && Date.parse(time) < (gap?.toUtcMs ?? 0));
+  expect(inGap).toEqual([]);
+});
+
+test('a picture of another size than was marked is not kept', async () => {
+  const world = await reading();
+  await world.watch(2, { size: { width: 640, height: 480 } });
+  expect(world.reader.view().spot).not.toBeNull();
+  expect(world.reader.view().sender.buffer).toMatchObject({ held: 0, stored: 0 });
+});
+
+test('a camera that was given up while it opened is closed', async () => {
+  const world = new World();
+  const opening = world.reader.openCamera(null);
+  world.reader.closeCamera();
+  await opening;
+  expect(world.events).toBeNull();
+  expect(world.reader.view().camera.kind).toBe('closed');
+  world.plugged = false;
+  await world.reader.openCamera('eye 2');
+  expect(world.reader.view().camera).toEqual({ kind: 'refused', why: 'No camera is connected.' });
+});

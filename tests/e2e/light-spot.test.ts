@@ -1,0 +1,107 @@
+import { mkdtempSync, rmSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { demoIds } from '@/db/demo/seed';
+import { levelsOf, writeSpotFilm } from '../support/spot-film';
+import { chapters, Hand, until } from './support/hand';
+import { labOfThisFile } from './support/lab';
+
+/** Story 6: the lab's laptop reads the light spot with its camera, which here shows a film of a spot whose places are known. */
+
+jest.setTimeout(120_000);
+const lab = labOfThisFile();
+const page = `/rigs/${demoIds.rig}/light-spot`;
+/** The scale of the test: 0.25 mm a px, 10 mm at column 0. */
+const mmAt = (px: number) => 10 + px / 4;
+
+let folder: string;
+let hand: Hand;
+const chapter = chapters(() => hand);
+
+beforeAll(async () => {
+  folder = mkdtempSync(join(tmpdir(), 'evenfall-film-'));
+  const film = join(folder, 'spot.y4m');
+  writeSpotFilm(film);
+  hand = new Hand(await lab().open('wide', 'owner', { film }));
+}, 60_000);
+afterAll(async () => {
+  expect(hand.browser.errors).toEqual([]);
+  await lab().close(hand.browser);
+  rmSync(folder, { recursive: true, force: true });
+});
+
+chapter('the page says what is still to do, and opens the camera', async () => {
+  await hand.goes(page, 'spot-screen');
+  await hand.reads('spot-missing', 'open the camera; mark two places of the scale; choose the channel; give the token of the device');
+  expect(await hand.isEnabled('begin-reading')).toBe(false);
+  await hand.taps('open-camera');
+  await hand.reads('spot-position', 'px');
+  expect(await hand.at('region-width').inputValue()).toBe('320');
+});
+
+chapter('a region that is not in the picture is refused in words, and one that is is taken', async () => {
+  await hand.types('region-height', '900');
+  await hand.sees(/The region ends at column 320 and row 980, but the picture has 320 × 240 px/);
+  await hand.types('region-top', '90');
+  await hand.types('region-height', '60');
+  await hand.reads('spot-position', 'px');
+});
+
+chapter('marks make the scale, with a residual from the third on', async () => {
+  for (const [px, mm] of [
+    [40, mmAt(40)],
+    [160, mmAt(160) + 0.03],
+    [280, mmAt(280)],
+  ] as const) {
+    await hand.types('mark-mm', String(mm));
+    await hand.taps('mark-spot');
+    const last = hand.page.getByTestId('spot-mark').last();
+    await last.getByLabel(/column/).fill(String(px));
+  }
+  await hand.reads('spot-scale', /off the line by \+0\.020 mm/);
+  await hand.reads('scale-fit', /for each px/);
+  await hand.page.getByLabel('Take mark 2 away').click();
+  await hand.reads('spot-position', 'mm');
+});
+
+chapter('a token is made here, and samples flow into the channel', async () => {
+  await hand.taps('spot-make-token');
+  await hand.taps('begin-reading');
+  await hand.at('end-reading').waitFor();
+  await hand.shoots('light-spot');
+  await hand.taps('go-black');
+  await hand.reads('black-figures', /\d mm/);
+  await hand.shoots('light-spot-black');
+  // The film shows each place for half a second.
+  await until(async () => new Set((await heard()).map(({ px }) => nearest(px))).size === levelsOf().length, 'every place of the spot to be stored');
+  await hand.page.keyboard.press('Escape');
+  await hand.taps('end-reading');
+});
+
+chapter('every sample is where the spot was, to 0.05 px rms', async () => {
+  const errors = (await heard()).map(({ px }) => px - nearest(px));
+  const rms = Math.sqrt(errors.reduce((sum, error) => sum + error * error, 0) / errors.length);
+  process.stdout.write(`     light spot: ${errors.length} samples, error ${rms.toFixed(4)} px rms, ${await hand.reads('spot-rate')}\n`);
+  expect(errors.length).toBeGreaterThan(levelsOf().length);
+  expect(rms).toBeLessThan(0.05);
+});
+
+chapter('a token that is no token keeps the samples on the page and says so', async () => {
+  await hand.types('spot-token', 'no token of this lab at all');
+  await hand.taps('begin-reading');
+  await hand.reads('spot-trouble', /There is no such device token, or it was revoked.*wait on this page and are sent again/);
+  await hand.taps('end-reading');
+});
+
+/** Stored samples as columns of the picture. */
+async function heard(): Promise<{ px: number }[]> {
+  const { server } = lab();
+  const devices = await server.as('viewer', 'GET', `/labs/${demoIds.lab}/rigs/${demoIds.rig}/devices`).expect(200);
+  const found = devices.body.channels.find(({ channel }: { channel: { name: string } }) => channel.name === 'light spot');
+  if (found === undefined) return [];
+  const nowUtcMs = server.clock.utcMs();
+  const samples = await server.services.samples.read(demoIds.lab, found.channel.id, { fromUtcMs: nowUtcMs - 600_000, toUtcMs: nowUtcMs + 60_000 });
+  return [...samples.value].map((mm) => ({ px: (mm - 10) * 4 }));
+}
+
+const nearest = (px: number) => levelsOf().reduce((best, level) => (Math.abs(level - px) < Math.abs(best - px) ? level : best));
