@@ -41,7 +41,7 @@ export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: 
         {cameras.length === 0 || !isOpen ? null : (
           <View className="min-w-[220px] flex-1">
             <Select
-              label="Camera"
+              label="Which camera"
               value={chosen}
               options={cameras.map(({ id, name }) => ({ value: id, label: name }))}
               onChange={open}

@@ -50,7 +50,7 @@ export function PictureView({ place, open, picture, region, spotPx, linePx, onRe
   };
   const drawn = dragged && picture !== null ? regionBetween(from, to, picture) : region;
   return (
-    <View className="gap-2">
+    <View className="w-full max-w-[640px] gap-2">
       <div
         data-testid="spot-picture"
         className="relative touch-none overflow-hidden rounded-panel bg-ink"
@@ -64,7 +64,7 @@ export function PictureView({ place, open, picture, region, spotPx, linePx, onRe
         onPointerUp={lift}
         onPointerCancel={() => setFrom(null)}
       >
-        <video ref={place.set} muted playsInline aria-label="What the camera sees" style={{ display: 'block', width: '100%' }} />
+        <video ref={place.set} muted playsInline aria-hidden style={{ display: 'block', width: '100%' }} />
         {picture === null ? null : (
           <svg
             aria-hidden

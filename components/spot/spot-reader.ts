@@ -63,6 +63,8 @@ export interface ReaderParts {
 
 const reopenMs = 3000;
 const askTimeMs = 20_000;
+/** While the server's time is known less well than this it is asked as often as a camera that is away is looked for. */
+const goodClockMs = 20;
 /** Longer than this without a kept sample is told as a gap, and twelve of them are remembered. */
 const gapMs = 3000;
 const gapsKept = 12;
@@ -208,10 +210,11 @@ export class SpotReader {
   private async learnTime(): Promise<void> {
     try {
       this.clock = afterExchange(this.clock, await this.parts.askTime());
+      if (clockUMs(this.clock, this.parts.nowMs()) <= goodClockMs) return;
     } catch {
       // What is known grows older, and its u with it.
-      this.dueMs.askTime = this.parts.nowMs() + reopenMs;
     }
+    this.dueMs.askTime = this.parts.nowMs() + reopenMs;
   }
 
   private utcNowMs(): number {

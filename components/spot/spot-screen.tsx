@@ -4,7 +4,7 @@ import { View } from 'react-native';
 import { Body, Button, Screen } from '@/components/ui';
 import { useRig } from '@/components/rigs/use-rig';
 import { fitScale } from '@/shared/spot/scale';
-import { regionFault } from '@/shared/spot/setting';
+import { isToken, regionFault } from '@/shared/spot/setting';
 import { BlackScreen } from './black-screen';
 import { CameraPanel } from './camera-panel';
 import { LivePanel } from './live-panel';
@@ -52,7 +52,7 @@ function stillToDo({ view, setting }: SpotPage): string[] {
     setting.region !== null && picture !== null && regionFault(setting.region, picture) !== null ? 'draw the region within the picture' : null,
     fitScale(setting.marks, setting.uMarkMm) === null ? 'mark two places of the scale' : null,
     setting.channel === '' ? 'choose the channel' : null,
-    setting.token.trim() === '' ? 'give the token of the device' : null,
+    !isToken(setting.token) ? 'give the token of the device' : null,
   ].filter((one) => one !== null);
 }
 

@@ -2,6 +2,7 @@ import { useState } from 'react';
 import { useLabMutation, useLabQuery, useMay, wordsOf } from '@/components/api';
 import { Body, Button, Field, Label, Panel, ProblemNotice, Section, Select } from '@/components/ui';
 import { listDevices, makeDeviceToken } from '@/shared/contracts/devices';
+import { isToken } from '@/shared/spot/setting';
 import type { SpotPage } from './use-spot-reader';
 
 /** The unit that the reader measures in. */
@@ -36,6 +37,7 @@ export function TargetPanel({ page, rigId }: { page: SpotPage; rigId: string }) 
           autoComplete="off"
           value={setting.token}
           onChange={(token) => change({ token })}
+          error={setting.token === '' || isToken(setting.token) ? undefined : 'A device token has at least 20 characters and no space in it.'}
           hint="It can fill the channel and do nothing else, and is kept on this device. An owner makes it, here or on the page of the rig, and can revoke it there."
           testID="spot-token"
         />

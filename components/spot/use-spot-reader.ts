@@ -6,7 +6,7 @@ import { fitScale } from '@/shared/spot/scale';
 import type { SpotSetting } from '@/shared/spot/setting';
 import { browserCamera } from './camera';
 import { watchDevice } from './device-watch';
-import { keepSetting, readSetting } from './kept-setting';
+import { KeptSetting } from './kept-setting';
 import { SpotReader, type ReaderView, type SpotPlan } from './spot-reader';
 import { SpotSender } from './spot-sender';
 
@@ -55,7 +55,8 @@ async function askTime() {
   return { sentMs, receivedMs: monotonicMs(), serverMs: Date.parse(data.serverAt) };
 }
 
-function makeReader(setting: SpotSetting) {
+function makeReader(rigId: string) {
+  const kept = new KeptSetting(rigId);
   const place = new VideoPlace();
   const device = watchDevice();
   const reader = new SpotReader(
@@ -67,19 +68,19 @@ function makeReader(setting: SpotSetting) {
       nowMs: monotonicMs,
       deviceUtcMs: deviceNowMs,
     },
-    planOf(setting),
+    planOf(kept.now),
   );
   const end = () => {
     reader.closeCamera();
     device.end();
   };
-  return { place, reader, end };
+  return { kept, place, reader, end };
 }
 
 /** The reader of a rig with its setting, which the device remembers. It lives as long as the page. */
 export function useSpotReader(rigId: string): SpotPage {
-  const [setting, setSetting] = useState(() => readSetting(rigId));
-  const [{ place, reader, end }] = useState(() => makeReader(setting));
+  const [{ kept, place, reader, end }] = useState(() => makeReader(rigId));
+  const [setting, setSetting] = useState(kept.now);
   const [view, setView] = useState(() => reader.view());
   useEffect(() => {
     const timer = setInterval(() => {
@@ -93,10 +94,9 @@ export function useSpotReader(rigId: string): SpotPage {
   }, [reader, end]);
   useStaysOpen(view.sending || view.sender.buffer.held > 0);
   const change = (part: Partial<SpotSetting>) => {
-    const next = { ...setting, ...part };
+    const next = kept.change(part);
     setSetting(next);
     reader.use(planOf(next));
-    keepSetting(rigId, next);
   };
   return { place, reader, view, setting, change };
 }

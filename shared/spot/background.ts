@@ -24,7 +24,7 @@ export function backgroundOf(mean: Float64Array, used: (x: number) => boolean, f
   };
 }
 
-export const median = (values: Iterable<number>): number => {
+const median = (values: Iterable<number>): number => {
   const sorted = Float64Array.from(values).sort();
   const half = sorted.length >> 1;
   return sorted.length % 2 === 1 ? (sorted[half] as number) : ((sorted[half - 1] as number) + (sorted[half] as number)) / 2;

@@ -34,6 +34,9 @@ export const freshSetting: SpotSetting = {
   token: '',
 };
 
+/** Whether a text can be the token of a device. */
+export const isToken = (text: string): boolean => /^\S{20,200}$/.test(text.trim());
+
 /** The middle third of a picture, all its width: where a scale lies that somebody has just aimed at. */
 export const usualRegion = ({ width, height }: { width: number; height: number }): Region => ({
   left: 0,

@@ -60,6 +60,12 @@ function places(): Place[] {
     { name: 'rig', path: rig, arrives: 'rig-screen' },
     { name: 'stations', path: `${rig}/stations`, arrives: 'torque-plot' },
     { name: 'rig-revisions', path: `${rig}/revisions`, arrives: '' },
+    {
+      name: 'light-spot',
+      path: `${rig}/light-spot`,
+      arrives: 'spot-screen',
+      first: async (hand) => void (await hand.reads('spot-missing', 'open the camera')),
+    },
     { name: 'link', path: `${rig}/link`, arrives: 'link-screen', first: (hand) => hand.tapsOn('Serial line', 'radio') },
     {
       name: 'first-move',

@@ -70,7 +70,7 @@ chapter('a token is made here, and samples flow into the channel', async () => {
   await hand.at('end-reading').waitFor();
   await hand.shoots('light-spot');
   await hand.taps('go-black');
-  await hand.reads('black-figures', /\d mm/);
+  await hand.reads('black-figures', /\) mm/);
   await hand.shoots('light-spot-black');
   // The film shows each place for half a second.
   await until(async () => new Set((await heard()).map(({ px }) => nearest(px))).size === levelsOf().length, 'every place of the spot to be stored');
@@ -87,7 +87,10 @@ chapter('every sample is where the spot was, to 0.05 px rms', async () => {
 });
 
 chapter('a token that is no token keeps the samples on the page and says so', async () => {
-  await hand.types('spot-token', 'no token of this lab at all');
+  await hand.types('spot-token', 'no token at all');
+  await hand.sees('at least 20 characters and no space');
+  expect(await hand.isEnabled('begin-reading')).toBe(false);
+  await hand.types('spot-token', 'no-token-of-this-lab-at-all');
   await hand.taps('begin-reading');
   await hand.reads('spot-trouble', /There is no such device token, or it was revoked.*wait on this page and are sent again/);
   await hand.taps('end-reading');
