@@ -31,7 +31,17 @@ export function BlackScreen({ view, onClose }: { view: ReaderView; onClose: () =
         event.preventDefault();
         onClose();
       }}
-      style={{ position: 'fixed', inset: 0, width: '100%', height: '100%', maxWidth: 'none', maxHeight: 'none', border: 0, padding: 0, background: '#000' }}
+      style={{
+        position: 'fixed',
+        inset: 0,
+        width: '100%',
+        height: '100%',
+        maxWidth: 'none',
+        maxHeight: 'none',
+        border: 0,
+        padding: 0,
+        background: '#000',
+      }}
     >
       <button
         type="button"

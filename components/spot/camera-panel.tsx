@@ -28,7 +28,7 @@ export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: 
     <Section title="Camera">
       <CameraNotice camera={view.camera} />
       <PictureView
-        place={place}
+        onVideo={place.set}
         open={isOpen || view.camera.kind === 'opening'}
         picture={isOpen ? picture : null}
         region={setting.region}
@@ -63,8 +63,8 @@ export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: 
       </View>
       {view.camera.kind === 'open' && view.camera.free.length > 0 ? (
         <Label>
-          The camera goes on setting by itself: {view.camera.free.join(', ')}. Set it by hand in its own program: each change moves the spot or
-          its brightness.
+          The camera goes on setting by itself: {view.camera.free.join(', ')}. Set it by hand in its own program: each change moves the spot
+          or its brightness.
         </Label>
       ) : null}
     </Section>
@@ -80,8 +80,8 @@ function CameraNotice({ camera }: { camera: CameraState }) {
       <View role="alert" className="flex-row gap-2">
         <Icon name="warning" tone="danger" />
         <Body className="flex-1">
-          The camera is away since {formatClock(camera.sinceUtcMs, { timeZone, precision: 'seconds' })}. {camera.why} It is looked for every 3 s, and nothing is stored
-          meanwhile; what was read until then is sent.
+          The camera is away since {formatClock(camera.sinceUtcMs, { timeZone, precision: 'seconds' })}. {camera.why} It is looked for every
+          3 s, and nothing is stored meanwhile; what was read until then is sent.
         </Body>
       </View>
     </Panel>

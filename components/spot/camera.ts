@@ -68,11 +68,16 @@ export function browserCamera(video: () => HTMLVideoElement | null): CameraPort 
       const media = devices();
       const screen = video();
       if (media === undefined || screen === null)
-        throw new CameraRefused('A browser gives a camera only to pages under https, or of this device itself. Open this page by such an address.');
+        throw new CameraRefused(
+          'A browser gives a camera only to pages under https, or of this device itself. Open this page by such an address.',
+        );
       if (typeof screen.requestVideoFrameCallback !== 'function')
         throw new CameraRefused('This browser does not tell when pictures are taken. Use a newer one.');
       try {
-        const stream = await media.getUserMedia({ audio: false, video: { ...wanted, ...(id === null ? {} : { deviceId: { exact: id } }) } });
+        const stream = await media.getUserMedia({
+          audio: false,
+          video: { ...wanted, ...(id === null ? {} : { deviceId: { exact: id } }) },
+        });
         return await shown(screen, stream, events);
       } catch (error) {
         throw new CameraRefused(wordsOfRefusal(error));

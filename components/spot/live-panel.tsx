@@ -27,7 +27,10 @@ export function LivePanel({ view }: { view: ReaderView }) {
           <Fact name="Noise, of the pixels" value={px(figures.uPx)} />
           <Fact name="Width at half height" value={px(spot?.widthPx ?? null)} />
           <Fact name="Brightest pixel" value={last === undefined ? '–' : formatPercent(last.brightest / 255)} />
-          <Fact name="Server's time" value={view.clockUMs === null ? 'not known' : `± ${formatSignificant(view.clockUMs, 2)}${NARROW_SPACE}ms`} />
+          <Fact
+            name="Server's time"
+            value={view.clockUMs === null ? 'not known' : `± ${formatSignificant(view.clockUMs, 2)}${NARROW_SPACE}ms`}
+          />
           <Fact name="Stored" value={`${sender.buffer.stored} samples`} testID="spot-stored" />
           <Fact name="Waiting" value={`${sender.buffer.held} samples`} testID="spot-waiting" />
         </View>
@@ -41,7 +44,9 @@ export function LivePanel({ view }: { view: ReaderView }) {
 export function positionWords({ spot, camera }: Pick<ReaderView, 'spot' | 'camera'>): string {
   if (camera.kind !== 'open') return camera.kind === 'lost' ? 'camera away' : 'no camera';
   if (spot === null) return 'no spot';
-  return spot.mm === null ? formatUncertain({ value: spot.px, u: spot.uPx, unit: 'px' }) : formatUncertain({ value: spot.mm, u: spot.uMm, unit: 'mm' });
+  return spot.mm === null
+    ? formatUncertain({ value: spot.px, u: spot.uPx, unit: 'px' })
+    : formatUncertain({ value: spot.mm, u: spot.uMm, unit: 'mm' });
 }
 
 function Fact({ name, value, testID }: { name: string; value: string; testID?: string }) {
@@ -62,7 +67,8 @@ function SenderWords({ view: { sender, gaps } }: { view: ReaderView }) {
     <>
       {sender.trouble === null ? null : (
         <Body role="status" tone="danger" testID="spot-trouble">
-          Not stored yet: {sender.trouble} {held} samples wait on this page and are sent again; it holds {usualLimits.most} of them, {holdsWords}.
+          Not stored yet: {sender.trouble} {held} samples wait on this page and are sent again; it holds {usualLimits.most} of them,{' '}
+          {holdsWords}.
         </Body>
       )}
       {dropped === null ? null : (
@@ -73,7 +79,8 @@ function SenderWords({ view: { sender, gaps } }: { view: ReaderView }) {
       )}
       {gaps.length === 0 ? null : (
         <Label testID="spot-gaps">
-          Nothing was read {gaps.map(({ fromUtcMs, toUtcMs }) => `for ${formatDuration((toUtcMs - fromUtcMs) / 1000)} until ${clock(toUtcMs)}`).join(', ')}.
+          Nothing was read{' '}
+          {gaps.map(({ fromUtcMs, toUtcMs }) => `for ${formatDuration((toUtcMs - fromUtcMs) / 1000)} until ${clock(toUtcMs)}`).join(', ')}.
         </Label>
       )}
     </>

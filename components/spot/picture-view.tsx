@@ -4,10 +4,9 @@ import { useTheme } from '@/components/theme';
 import { Label } from '@/components/ui';
 import type { Region } from '@/shared/spot/intensities';
 import { regionBetween } from '@/shared/spot/setting';
-import type { VideoPlace } from './use-spot-reader';
 
 interface PictureViewProps {
-  place: VideoPlace;
+  onVideo: (element: HTMLVideoElement | null) => void;
   open: boolean;
   /** Null while there is no picture. */
   picture: { width: number; height: number } | null;
@@ -27,7 +26,7 @@ interface Point {
 const tapPx = 8;
 
 /** What the camera sees, with the region and the spot in it. A drag draws the region, a tap sets the line; both can be typed as well. */
-export function PictureView({ place, open, picture, region, spotPx, linePx, onRegion, onLine }: PictureViewProps) {
+export function PictureView({ onVideo, open, picture, region, spotPx, linePx, onRegion, onLine }: PictureViewProps) {
   const { colors } = useTheme();
   const [from, setFrom] = useState<Point | null>(null);
   const [to, setTo] = useState<Point | null>(null);
@@ -64,7 +63,7 @@ export function PictureView({ place, open, picture, region, spotPx, linePx, onRe
         onPointerUp={lift}
         onPointerCancel={() => setFrom(null)}
       >
-        <video ref={place.set} muted playsInline aria-hidden style={{ display: 'block', width: '100%' }} />
+        <video ref={onVideo} muted playsInline aria-hidden style={{ display: 'block', width: '100%' }} />
         {picture === null ? null : (
           <svg
             aria-hidden

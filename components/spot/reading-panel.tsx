@@ -68,8 +68,8 @@ export function ReadingPanel({ page }: { page: SpotPage }) {
           testID="spot-light"
         />
         <Label>
-          The centroid suits a round spot or a slit; an edge suits a broad band of light whose other side leaves the picture. Whatever is chosen,
-          mark the scale anew by it.
+          The centroid suits a round spot or a slit; an edge suits a broad band of light whose other side leaves the picture. Whatever is
+          chosen, mark the scale anew by it.
         </Label>
       </Panel>
     </Section>

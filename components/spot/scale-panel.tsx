@@ -16,13 +16,21 @@ export function ScalePanel({ page, linePx }: { page: SpotPage; linePx: number | 
   const scale = fitScale(marks, uMarkMm);
   const replace = (index: number, mark: Mark) => change({ marks: marks.map((each, i) => (i === index ? mark : each)) });
   return (
-    <Section title="Scale" remark="Two marks make a scale; from three on their residuals show whether it is straight. Five over the whole range are good.">
+    <Section
+      title="Scale"
+      remark="Two marks make a scale; from three on their residuals show whether it is straight. Five over the whole range are good."
+    >
       <Panel className="gap-4" testID="spot-scale">
         {marks.map((mark, index) => (
           <View key={index} className="gap-1" testID="spot-mark">
             <View className="flex-row items-end gap-2">
               <View className="min-w-0 flex-1">
-                <NumberField label={`Mark ${index + 1}, column`} value={mark.px} unit="px" onChange={(px) => replace(index, { ...mark, px })} />
+                <NumberField
+                  label={`Mark ${index + 1}, column`}
+                  value={mark.px}
+                  unit="px"
+                  onChange={(px) => replace(index, { ...mark, px })}
+                />
               </View>
               <View className="min-w-0 flex-1">
                 <NumberField label="on the scale" value={mark.mm} unit="mm" onChange={(mm) => replace(index, { ...mark, mm })} />
@@ -81,7 +89,13 @@ function AddMark({ page, linePx }: { page: SpotPage; linePx: number | null }) {
           onPress={() => add(spotPx ?? 0)}
           testID="mark-spot"
         />
-        <Button icon="plus" label="At the dashed line" disabled={mm === null || linePx === null} onPress={() => add(linePx ?? 0)} testID="mark-line" />
+        <Button
+          icon="plus"
+          label="At the dashed line"
+          disabled={mm === null || linePx === null}
+          onPress={() => add(linePx ?? 0)}
+          testID="mark-line"
+        />
       </View>
     </View>
   );
@@ -99,8 +113,8 @@ function Fit({ marks, uMarkMm }: { marks: readonly Mark[]; uMarkMm: number }) {
   return (
     <View className="gap-1" testID="scale-fit">
       <Body>
-        {formatUncertain({ value: mmPerPx, u: uMmPerPx, unit: 'mm' })} for each px, that is ± {formatPercent(uMmPerPx / Math.abs(mmPerPx))} of every
-        difference.
+        {formatUncertain({ value: mmPerPx, u: uMmPerPx, unit: 'mm' })} for each px, that is ± {formatPercent(uMmPerPx / Math.abs(mmPerPx))}{' '}
+        of every difference.
       </Body>
       <Label>
         {scatterMm === null

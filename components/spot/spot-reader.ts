@@ -164,7 +164,14 @@ export class SpotReader {
       sender: this.parts.sender.now,
       gaps: this.gaps,
       clockUMs: uMs,
-      warnings: warningsOf({ health: this.health, figures, device: this.parts.device.now(), stamped: this.stamped, clockUMs: uMs, clockErrorMs }),
+      warnings: warningsOf({
+        health: this.health,
+        figures,
+        device: this.parts.device.now(),
+        stamped: this.stamped,
+        clockUMs: uMs,
+        clockErrorMs,
+      }),
     };
   }
 

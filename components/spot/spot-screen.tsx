@@ -45,11 +45,14 @@ export function SpotScreen() {
 /** What still has to be done before samples can be kept. */
 function stillToDo({ view, setting }: SpotPage): string[] {
   const { picture } = view;
-  const sameSize = picture === null || setting.picture === null || (picture.width === setting.picture.width && picture.height === setting.picture.height);
+  const sameSize =
+    picture === null || setting.picture === null || (picture.width === setting.picture.width && picture.height === setting.picture.height);
   return [
     view.camera.kind === 'open' ? null : 'open the camera',
     sameSize ? null : 'draw the region and mark the scale anew, because the picture has another size than before',
-    setting.region !== null && picture !== null && regionFault(setting.region, picture) !== null ? 'draw the region within the picture' : null,
+    setting.region !== null && picture !== null && regionFault(setting.region, picture) !== null
+      ? 'draw the region within the picture'
+      : null,
     fitScale(setting.marks, setting.uMarkMm) === null ? 'mark two places of the scale' : null,
     setting.channel === '' ? 'choose the channel' : null,
     !isToken(setting.token) ? 'give the token of the device' : null,

@@ -1,5 +1,13 @@
 import { ApiProblem } from '@/components/api/problem';
-import { bufferAfter, emptyBuffer, linesOf, type BufferEvent, type BufferLimits, type SpotBuffer, type SpotSample } from '@/shared/spot/buffer';
+import {
+  bufferAfter,
+  emptyBuffer,
+  linesOf,
+  type BufferEvent,
+  type BufferLimits,
+  type SpotBuffer,
+  type SpotSample,
+} from '@/shared/spot/buffer';
 
 export interface SpotTarget {
   channel: string;

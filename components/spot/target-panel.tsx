@@ -37,7 +37,9 @@ export function TargetPanel({ page, rigId }: { page: SpotPage; rigId: string }) 
           autoComplete="off"
           value={setting.token}
           onChange={(token) => change({ token })}
-          error={setting.token === '' || isToken(setting.token) ? undefined : 'A device token has at least 20 characters and no space in it.'}
+          error={
+            setting.token === '' || isToken(setting.token) ? undefined : 'A device token has at least 20 characters and no space in it.'
+          }
           hint="It can fill the channel and do nothing else, and is kept on this device. An owner makes it, here or on the page of the rig, and can revoke it there."
           testID="spot-token"
         />

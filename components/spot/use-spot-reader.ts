@@ -11,7 +11,7 @@ import { SpotReader, type ReaderView, type SpotPlan } from './spot-reader';
 import { SpotSender } from './spot-sender';
 
 /** Where the camera's pictures are shown. */
-export class VideoPlace {
+class VideoPlace {
   element: HTMLVideoElement | null = null;
   readonly set = (element: HTMLVideoElement | null): void => {
     this.element = element;

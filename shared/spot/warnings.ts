@@ -50,7 +50,9 @@ function ofLight({ health, figures }: WarningFacts): string[] {
       `${last.saturated} pixels are saturated: the top of the spot is cut flat, and where it lies is known less well than is stated. Shorten the exposure or dim the spot.`,
     );
   if (last.reading.kind === 'spot' && last.reading.second)
-    found.push('Something else in the region is nearly as bright, perhaps the reflection from the window. Draw the region so that it holds one spot.');
+    found.push(
+      'Something else in the region is nearly as bright, perhaps the reflection from the window. Draw the region so that it holds one spot.',
+    );
   const { noisePx, uPx } = figures;
   if (noisePx !== null && uPx !== null && noisePx > MOST.noiseOverU * uPx)
     found.push(
@@ -68,9 +70,12 @@ function ofFrames({ health, figures, stamped }: WarningFacts): string[] {
       `The rate has fallen to ${formatSignificant(rateHz, 2)} of ${formatSignificant(health.bestRateHz, 2)} pictures a second: the browser holds this page back, or the camera exposes longer in the dark. Set its exposure by hand.`,
     );
   const share = health.frames === 0 ? 0 : health.missed / (health.frames + health.missed);
-  if (share > MOST.missedShare) found.push(`${formatPercent(share)} of the pictures were missed: this device is busy, or the region is too large for it.`);
+  if (share > MOST.missedShare)
+    found.push(`${formatPercent(share)} of the pictures were missed: this device is busy, or the region is too large for it.`);
   if (health.frames > 0 && stamped === 'shown')
-    found.push('The camera does not tell when a picture was taken: samples bear the moment it was shown, late by one to three pictures. Set the clock offset of the evaluation.');
+    found.push(
+      'The camera does not tell when a picture was taken: samples bear the moment it was shown, late by one to three pictures. Set the clock offset of the evaluation.',
+    );
   return found;
 }
 

@@ -73,7 +73,10 @@ chapter('a token is made here, and samples flow into the channel', async () => {
   await hand.reads('black-figures', /\) mm/);
   await hand.shoots('light-spot-black');
   // The film shows each place for half a second.
-  await until(async () => new Set((await heard()).map(({ px }) => nearest(px))).size === levelsOf().length, 'every place of the spot to be stored');
+  await until(
+    async () => new Set((await heard()).map(({ px }) => nearest(px))).size === levelsOf().length,
+    'every place of the spot to be stored',
+  );
   await hand.page.keyboard.press('Escape');
   await hand.taps('end-reading');
 });
@@ -103,7 +106,10 @@ async function heard(): Promise<{ px: number }[]> {
   const found = devices.body.channels.find(({ channel }: { channel: { name: string } }) => channel.name === 'light spot');
   if (found === undefined) return [];
   const nowUtcMs = server.clock.utcMs();
-  const samples = await server.services.samples.read(demoIds.lab, found.channel.id, { fromUtcMs: nowUtcMs - 600_000, toUtcMs: nowUtcMs + 60_000 });
+  const samples = await server.services.samples.read(demoIds.lab, found.channel.id, {
+    fromUtcMs: nowUtcMs - 600_000,
+    toUtcMs: nowUtcMs + 60_000,
+  });
   return [...samples.value].map((mm) => ({ px: (mm - 10) * 4 }));
 }
 

@@ -14,7 +14,13 @@ const plan: SpotPlan = {
   region,
   of: 'centre',
   light: 'all',
-  scale: fitScale([{ px: 20, mm: 0 }, { px: 120, mm: 50 }], 0.1),
+  scale: fitScale(
+    [
+      { px: 20, mm: 0 },
+      { px: 120, mm: 50 },
+    ],
+    0.1,
+  ),
   picture,
   target: { channel: 'light spot', token: 'a token of twenty letters' },
 };
@@ -35,7 +41,12 @@ class World {
       this.opened.push(id);
       if (!this.plugged) return Promise.reject(new CameraRefused('No camera is connected.'));
       this.events = events;
-      return Promise.resolve({ id: 'eye 1', name: 'Eye', holdSettings: () => Promise.resolve(['focus']), close: () => void (this.events = null) });
+      return Promise.resolve({
+        id: 'eye 1',
+        name: 'Eye',
+        holdSettings: () => Promise.resolve(['focus']),
+        close: () => void (this.events = null),
+      });
     },
   };
   readonly sender = new SpotSender({
@@ -169,7 +180,9 @@ test('a camera unplugged in the night is told and looked for, the same one; the 
   expect(new Set(world.opened.slice(1))).toEqual(new Set(['eye 1']));
   const [gap] = world.reader.view().gaps;
   expect((gap?.toUtcMs ?? 0) - (gap?.fromUtcMs ?? 0)).toBeGreaterThan(9000);
-  const inGap = world.samples.filter(({ time_utc: time }) => Date.parse(time) > (gap?.fromUtcMs ?? 0) && Date.parse(time) < (gap?.toUtcMs ?? 0));
+  const inGap = world.samples.filter(
+    ({ time_utc: time }) => Date.parse(time) > (gap?.fromUtcMs ?? 0) && Date.parse(time) < (gap?.toUtcMs ?? 0),
+  );
   expect(inGap).toEqual([]);
 });
 

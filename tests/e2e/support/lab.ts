@@ -76,7 +76,11 @@ export class Lab {
   }
 
   /** A browser, signed in where a role is given; `address` is where a network of its own begins. */
-  async open(size: Size, role?: Role, { address = this.address, ...options }: BrowserOptions & { address?: string } = {}): Promise<Browser> {
+  async open(
+    size: Size,
+    role?: Role,
+    { address = this.address, ...options }: BrowserOptions & { address?: string } = {},
+  ): Promise<Browser> {
     const browser = await openBrowser(address, size, options);
     this.browsers.add(browser);
     if (role !== undefined) await this.enter(browser, role);

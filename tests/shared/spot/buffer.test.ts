@@ -1,8 +1,9 @@
-import fc from 'fast-check';
+import * as fc from 'fast-check';
 import { bufferAfter, emptyBuffer, linesOf, type BufferEvent, type SpotBuffer } from '@/shared/spot/buffer';
 
 const limits = { most: 500, batch: 150 };
-const after = (events: BufferEvent[], from: SpotBuffer = emptyBuffer) => events.reduce((buffer, event) => bufferAfter(buffer, event, limits), from);
+const after = (events: BufferEvent[], from: SpotBuffer = emptyBuffer) =>
+  events.reduce((buffer, event) => bufferAfter(buffer, event, limits), from);
 const measured = (from: number, count: number): BufferEvent[] =>
   Array.from({ length: count }, (_, i) => ({ type: 'measured', sample: { utcMs: from + i, mm: (from + i) / 10 } }));
 const times = (samples: readonly { utcMs: number }[] | null) => (samples ?? []).map(({ utcMs }) => utcMs);

@@ -17,7 +17,9 @@ const seen = (frames: SeenFrame[], from: SpotHealth = noFrames) => frames.reduce
 test('rate, missed pictures and noise of a spot that moves steadily', () => {
   const deviate = seeded(11);
   // 25 pictures a second, moving 3 px a second, scattered by 0.05 px.
-  const frames = Array.from({ length: 400 }, (_, i) => frame(i, spot(100 + i * 0.12 + 0.05 * deviate()), { missed: i % 100 === 50 ? 2 : 0 }));
+  const frames = Array.from({ length: 400 }, (_, i) =>
+    frame(i, spot(100 + i * 0.12 + 0.05 * deviate()), { missed: i % 100 === 50 ? 2 : 0 }),
+  );
   const noise: number[] = [];
   let health = noFrames;
   for (const one of frames) {
@@ -66,7 +68,11 @@ test.each<[string, Partial<WarningFacts>, RegExp]>([
   ['a device whose clock is wrong', { clockErrorMs: -90_000 }, /clock of this device is .* behind the server's/],
   ['a page out of sight', { device: { awake: true, battery: null, hidden: true } }, /This page is not seen/],
   ['sleep', { device: { awake: null, battery: null, hidden: false } }, /cannot keep the device awake/],
-  ['a low battery', { device: { awake: true, battery: { level: 0.22, charging: false }, hidden: false } }, /22.% left: it will not last the night/],
+  [
+    'a low battery',
+    { device: { awake: true, battery: { level: 0.22, charging: false }, hidden: false } },
+    /22.% left: it will not last the night/,
+  ],
 ])('%s is said', (_, over, words) => {
   const said = warningsOf(facts(over));
   expect(said).toHaveLength(1);

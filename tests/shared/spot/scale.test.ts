@@ -27,7 +27,10 @@ test('marks give a straight scale with residuals, as by hand', () => {
 
 test('the general least squares say the same', () => {
   const scale = fitScale(marks, 0.01);
-  const general = leastSquares([marks.map(() => 1), marks.map(({ px }) => px)], marks.map(({ mm }) => mm));
+  const general = leastSquares(
+    [marks.map(() => 1), marks.map(({ px }) => px)],
+    marks.map(({ mm }) => mm),
+  );
   const [[varianceA = 0, covariance = 0] = [], [, varianceB = 0] = []] = general.unitCovariance;
   const s2 = general.ssr / 3;
   const px = 480;
@@ -40,7 +43,13 @@ test('the general least squares say the same', () => {
 });
 
 test('two marks have no residuals: what was stated counts, also where the scale runs the other way', () => {
-  const scale = fitScale([{ px: 0, mm: 100 }, { px: 500, mm: 50 }], 0.2);
+  const scale = fitScale(
+    [
+      { px: 0, mm: 100 },
+      { px: 500, mm: 50 },
+    ],
+    0.2,
+  );
   expect(scale).toMatchObject({ mmPerPx: -0.1, scatterMm: null });
   expect(scale?.uMmPerPx).toBeCloseTo(0.2 / Math.sqrt(2 * 250 ** 2), 12);
 });
@@ -48,6 +57,22 @@ test('two marks have no residuals: what was stated counts, also where the scale 
 test('where there is no scale there is none', () => {
   expect(fitScale([], 0.2)).toBeNull();
   expect(fitScale([{ px: 4, mm: 1 }], 0.2)).toBeNull();
-  expect(fitScale([{ px: 4, mm: 1 }, { px: 4, mm: 9 }], 0.2)).toBeNull();
-  expect(fitScale([{ px: 4, mm: 9 }, { px: 90, mm: 9 }], 0.2)).toBeNull();
+  expect(
+    fitScale(
+      [
+        { px: 4, mm: 1 },
+        { px: 4, mm: 9 },
+      ],
+      0.2,
+    ),
+  ).toBeNull();
+  expect(
+    fitScale(
+      [
+        { px: 4, mm: 9 },
+        { px: 90, mm: 9 },
+      ],
+      0.2,
+    ),
+  ).toBeNull();
 });
