@@ -3,7 +3,7 @@ import { View } from 'react-native';
 import { useLab } from '@/components/api';
 import { Body, Button, Icon, Label, Panel, ProblemNotice, Section, Select } from '@/components/ui';
 import { formatClock } from '@/shared/lib/format-time';
-import { usualRegion } from '@/shared/spot/setting';
+import { isSamePicture, usualRegion } from '@/shared/spot/setting';
 import { browserCamera } from './camera';
 import { PictureView } from './picture-view';
 import type { CameraState } from './spot-reader';
@@ -15,11 +15,12 @@ export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: 
   const cameras = useCameras(view.camera.kind);
   const { picture, spot } = view;
   const isOpen = view.camera.kind === 'open' || view.camera.kind === 'lost';
-  const chosen = view.camera.kind === 'open' ? view.camera.id : (setting.cameraId ?? '');
+  const opened = view.camera.kind === 'open' ? view.camera.id : null;
   useEffect(() => {
+    if (opened !== null && opened !== setting.cameraId) change({ cameraId: opened });
     if (picture !== null && setting.region === null) change({ region: usualRegion(picture), picture });
   });
-  const marksFit = setting.picture === null || (setting.picture.width === picture?.width && setting.picture.height === picture.height);
+  const marksFit = setting.picture === null || (picture !== null && isSamePicture(setting.picture, picture));
   const open = (id: string | null) => {
     change({ cameraId: id });
     void reader.openCamera(id);
@@ -38,13 +39,14 @@ export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: 
         onLine={onLine}
       />
       <View className="flex-row flex-wrap items-end gap-3">
-        {cameras.length === 0 || !isOpen ? null : (
+        {cameras.length === 0 ? null : (
           <View className="min-w-[220px] flex-1">
             <Select
               label="Which camera"
-              value={chosen}
-              options={cameras.map(({ id, name }) => ({ value: id, label: name }))}
-              onChange={open}
+              value={setting.cameraId ?? ''}
+              options={optionsOf(cameras, setting.cameraId)}
+              onChange={(id) => open(id === '' ? null : id)}
+              disabled={view.sending}
               testID="spot-camera"
             />
           </View>
@@ -69,6 +71,15 @@ export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: 
       ) : null}
     </Section>
   );
+}
+
+/** The cameras to choose from, with the one that was read before, though it may be away. */
+function optionsOf(cameras: readonly { id: string; name: string }[], chosen: string | null) {
+  const options = cameras.map(({ id, name }) => ({ value: id, label: name }));
+  if (chosen === null) return [{ value: '', label: 'Any' }, ...options];
+  return options.some(({ value }) => value === chosen)
+    ? options
+    : [{ value: chosen, label: 'The one of before, which is away' }, ...options];
 }
 
 function CameraNotice({ camera }: { camera: CameraState }) {

@@ -31,7 +31,7 @@ export interface OpenCamera {
 export interface CameraPort {
   /** @throws CameraRefused */
   open(id: string | null, events: CameraEvents): Promise<OpenCamera>;
-  /** Cameras of this device; without names before one was allowed. */
+  /** Cameras of this device; none before one was allowed. */
   list(): Promise<{ id: string; name: string }[]>;
 }
 
@@ -61,7 +61,7 @@ export function browserCamera(video: () => HTMLVideoElement | null): CameraPort 
     async list() {
       const all = (await devices()?.enumerateDevices()) ?? [];
       return all
-        .filter(({ kind }) => kind === 'videoinput')
+        .filter(({ kind, deviceId }) => kind === 'videoinput' && deviceId !== '')
         .map(({ deviceId, label }, index) => ({ id: deviceId, name: label === '' ? `Camera ${index + 1}` : label }));
     },
     async open(id, events) {

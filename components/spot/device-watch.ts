@@ -5,6 +5,7 @@ export interface DeviceWatch {
   now(): WatchedDevice;
   /** From now on the device is to stay awake. */
   keepAwake(): void;
+  letSleep(): void;
   end(): void;
 }
 
@@ -30,6 +31,11 @@ export function watchDevice(): DeviceWatch {
       () => undefined,
     );
   };
+  const letSleep = () => {
+    wanted = false;
+    void lock?.release();
+    lock = null;
+  };
   browser.getBattery?.().then(
     (found) => {
       battery = found;
@@ -48,10 +54,10 @@ export function watchDevice(): DeviceWatch {
       wanted = true;
       ask();
     },
+    letSleep,
     end: () => {
-      wanted = false;
+      letSleep();
       document.removeEventListener('visibilitychange', ask);
-      void lock?.release();
     },
   };
 }

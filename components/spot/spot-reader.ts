@@ -3,7 +3,7 @@ import { intensitiesOf, type Light, type Region } from '@/shared/spot/intensitie
 import { readSpot, type ReadingOf, type SpotReading } from '@/shared/spot/read-spot';
 import { mmAt, uMmAt, type SpotScale } from '@/shared/spot/scale';
 import { afterExchange, clockUMs, utcMsAt, type ServerClock } from '@/shared/spot/server-clock';
-import { regionFault } from '@/shared/spot/setting';
+import { isSamePicture, regionFault, type MarkedPicture } from '@/shared/spot/setting';
 import { warningsOf } from '@/shared/spot/warnings';
 import type { CameraFrame, CameraPort, OpenCamera } from './camera';
 import type { DeviceWatch } from './device-watch';
@@ -15,8 +15,8 @@ export interface SpotPlan {
   of: ReadingOf;
   light: Light;
   scale: SpotScale | null;
-  /** Picture that region and scale belong to, px. */
-  picture: { width: number; height: number } | null;
+  /** The pictures that region and scale belong to. */
+  picture: MarkedPicture | null;
   target: SpotTarget;
 }
 
@@ -36,8 +36,8 @@ export interface Gap {
 
 export interface ReaderView {
   camera: CameraState;
-  /** Size of the pictures that come, px. */
-  picture: { width: number; height: number } | null;
+  /** The pictures that come. */
+  picture: MarkedPicture | null;
   health: SpotHealth;
   figures: SpotFigures;
   /** The last position, in the whole picture and on the scale. */
@@ -62,6 +62,8 @@ export interface ReaderParts {
 }
 
 const reopenMs = 3000;
+/** How long a camera may find its exposure by itself before that is held. */
+const settleMs = 3000;
 const askTimeMs = 20_000;
 /** While the server's time is known less well than this it is asked as often as a camera that is away is looked for. */
 const goodClockMs = 20;
@@ -77,14 +79,14 @@ export class SpotReader {
   private camera: CameraState = { kind: 'closed' };
   private open: OpenCamera | null = null;
   private wantedId: string | null = null;
-  private picture: { width: number; height: number } | null = null;
+  private picture: MarkedPicture | null = null;
   private health: SpotHealth = noFrames;
   private stamped: 'capture' | 'shown' = 'capture';
   private clock: ServerClock | null = null;
   private sending = false;
   private keptMs: number | null = null;
   private gaps: Gap[] = [];
-  private dueMs = { reopen: 0, askTime: 0 };
+  private dueMs = { reopen: 0, askTime: 0, hold: 0 };
   /** Counts the wishes for a camera: one that opens after it was given up is closed at once. */
   private wish = 0;
 
@@ -133,6 +135,7 @@ export class SpotReader {
   end(): void {
     this.sending = false;
     this.keptMs = null;
+    this.parts.device.letSleep();
   }
 
   async step(): Promise<void> {
@@ -141,6 +144,10 @@ export class SpotReader {
     if (this.camera.kind === 'lost' && nowMs >= this.dueMs.reopen) {
       this.dueMs.reopen = Infinity;
       work.push(this.reopen());
+    }
+    if (this.sending && this.open !== null && nowMs >= this.dueMs.hold) {
+      this.dueMs.hold = Infinity;
+      work.push(this.hold(this.open));
     }
     if (nowMs >= this.dueMs.askTime) {
       this.dueMs.askTime = nowMs + askTimeMs;
@@ -194,6 +201,10 @@ export class SpotReader {
     // The same camera again, never another one that happens to be there: its picture would show another place.
     this.wantedId = open.id === '' ? this.wantedId : open.id;
     this.camera = { kind: 'open', name: open.name, id: open.id, free: [] };
+    this.dueMs.hold = this.parts.nowMs() + settleMs;
+  }
+
+  private async hold(open: OpenCamera): Promise<void> {
     const free = await open.holdSettings();
     if (this.open === open) this.camera = { kind: 'open', name: open.name, id: open.id, free };
   }
@@ -229,7 +240,7 @@ export class SpotReader {
   }
 
   private seen(frame: CameraFrame): void {
-    this.picture = { width: frame.width, height: frame.height };
+    this.picture = { cameraId: this.open?.id ?? this.wantedId ?? '', width: frame.width, height: frame.height };
     this.stamped = frame.stamped;
     const { region, light, of } = this.plan;
     // The same picture told twice is one.
@@ -245,7 +256,7 @@ export class SpotReader {
 
   private keep(frame: CameraFrame, reading: SpotReading): void {
     const { scale, picture } = this.plan;
-    const fits = picture !== null && picture.width === frame.width && picture.height === frame.height;
+    const fits = picture !== null && this.picture !== null && isSamePicture(picture, this.picture);
     if (reading.kind !== 'spot' || scale === null || this.clock === null || !fits) return;
     if (this.keptMs !== null && frame.capturedMs - this.keptMs > gapMs) this.noteGap(this.keptMs, frame.capturedMs);
     this.keptMs = frame.capturedMs;

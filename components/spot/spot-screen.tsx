@@ -4,7 +4,7 @@ import { View } from 'react-native';
 import { Body, Button, Screen } from '@/components/ui';
 import { useRig } from '@/components/rigs/use-rig';
 import { fitScale } from '@/shared/spot/scale';
-import { isToken, regionFault } from '@/shared/spot/setting';
+import { isSamePicture, isToken, regionFault } from '@/shared/spot/setting';
 import { BlackScreen } from './black-screen';
 import { CameraPanel } from './camera-panel';
 import { LivePanel } from './live-panel';
@@ -45,11 +45,10 @@ export function SpotScreen() {
 /** What still has to be done before samples can be kept. */
 function stillToDo({ view, setting }: SpotPage): string[] {
   const { picture } = view;
-  const sameSize =
-    picture === null || setting.picture === null || (picture.width === setting.picture.width && picture.height === setting.picture.height);
+  const same = picture === null || setting.picture === null || isSamePicture(picture, setting.picture);
   return [
     view.camera.kind === 'open' ? null : 'open the camera',
-    sameSize ? null : 'draw the region and mark the scale anew, because the picture has another size than before',
+    same ? null : 'draw the region and mark the scale anew, because camera or picture size is another one than they belong to',
     setting.region !== null && picture !== null && regionFault(setting.region, picture) !== null
       ? 'draw the region within the picture'
       : null,

@@ -8,8 +8,8 @@ const wholePx = z.number().int().nonnegative();
 
 export const spotSettingSchema = z.strictObject({
   cameraId: z.string().nullable(),
-  /** Size of the picture that region and marks belong to, px. */
-  picture: z.strictObject({ width: wholePx, height: wholePx }).nullable(),
+  /** The pictures that region and marks belong to: of one camera, in one size, px. */
+  picture: z.strictObject({ cameraId: z.string(), width: wholePx, height: wholePx }).nullable(),
   region: z.strictObject({ left: wholePx, top: wholePx, width: wholePx, height: wholePx }).nullable(),
   of: z.enum(['centre', 'left', 'right']),
   light: z.enum(['all', 'red', 'green', 'blue']),
@@ -20,6 +20,7 @@ export const spotSettingSchema = z.strictObject({
   /** Token of a device that may fill the channel. */
   token: z.string(),
 });
+export type MarkedPicture = NonNullable<z.infer<typeof spotSettingSchema>['picture']>;
 export type SpotSetting = z.infer<typeof spotSettingSchema>;
 
 export const freshSetting: SpotSetting = {
@@ -36,6 +37,10 @@ export const freshSetting: SpotSetting = {
 
 /** Whether a text can be the token of a device. */
 export const isToken = (text: string): boolean => /^\S{20,200}$/.test(text.trim());
+
+/** Whether two pictures are of one camera and size, so that a column means the same place. */
+export const isSamePicture = (a: MarkedPicture, b: MarkedPicture): boolean =>
+  a.cameraId === b.cameraId && a.width === b.width && a.height === b.height;
 
 /** The middle third of a picture, all its width: where a scale lies that somebody has just aimed at. */
 export const usualRegion = ({ width, height }: { width: number; height: number }): Region => ({

@@ -31,7 +31,9 @@ afterAll(async () => {
 });
 
 chapter('the page says what is still to do, and opens the camera', async () => {
-  await hand.goes(page, 'spot-screen');
+  const answer = await hand.page.goto(page);
+  expect(answer?.headers()['permissions-policy']).toMatch(/^camera=\(self\), microphone=\(\)/);
+  await hand.at('spot-screen').waitFor();
   await hand.reads('spot-missing', 'open the camera; mark two places of the scale; choose the channel; give the token of the device');
   expect(await hand.isEnabled('begin-reading')).toBe(false);
   await hand.taps('open-camera');

@@ -21,7 +21,7 @@ const plan: SpotPlan = {
     ],
     0.1,
   ),
-  picture,
+  picture: { cameraId: 'eye 1', ...picture },
   target: { channel: 'light spot', token: 'a token of twenty letters' },
 };
 
@@ -64,6 +64,7 @@ class World {
       device: {
         now: () => ({ awake: this.awake, battery: null, hidden: false }),
         keepAwake: () => void (this.awake = true),
+        letSleep: () => void (this.awake = false),
         end: () => undefined,
       },
       sender: this.sender,
@@ -122,6 +123,7 @@ async function reading(): Promise<World> {
 test('positions on the scale reach the server once each, with the moment the pictures were taken, by the server’s clock', async () => {
   const world = await reading();
   await world.watch(3);
+  expect(world.awake).toBe(true);
   world.reader.end();
   await world.watch(2);
   const { samples } = world;
@@ -134,7 +136,6 @@ test('positions on the scale reach the server once each, with the moment the pic
     expect(Math.abs(value - 35)).toBeLessThan(0.06);
   }
   expect(world.reader.view()).toMatchObject({ sending: false, sender: { buffer: { stored: 30, held: 0 }, trouble: null }, gaps: [] });
-  expect(world.awake).toBe(true);
   expect(world.reader.view().warnings.join()).toMatch(/clock of this device is .* ahead of the server's/);
   expect(world.reader.view().camera).toMatchObject({ kind: 'open', free: ['focus'] });
 });
@@ -186,8 +187,11 @@ test('a camera unplugged in the night is told and looked for, the same one; the 
   expect(inGap).toEqual([]);
 });
 
-test('a picture of another size than was marked is not kept', async () => {
+test('a picture of another size or another camera than was marked is not kept', async () => {
   const world = await reading();
+  world.reader.use({ ...plan, picture: { cameraId: 'eye 2', ...picture } });
+  await world.watch(1);
+  world.reader.use(plan);
   await world.watch(2, { size: { width: 640, height: 480 } });
   expect(world.reader.view().spot).not.toBeNull();
   expect(world.reader.view().sender.buffer).toMatchObject({ held: 0, stored: 0 });
