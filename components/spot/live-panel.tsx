@@ -67,8 +67,8 @@ function SenderWords({ view: { sender, gaps } }: { view: ReaderView }) {
     <>
       {sender.trouble === null ? null : (
         <Body role="status" tone="danger" testID="spot-trouble">
-          Not stored yet: {sender.trouble} {held} samples wait on this page and are sent again; it holds {usualLimits.most} of them,{' '}
-          {holdsWords}.
+          Not stored yet: {sender.trouble} {held} samples wait on this page and are sent again; it holds{' '}
+          {formatFixed(usualLimits.most, { decimals: 0 })} of them, {holdsWords}.
         </Body>
       )}
       {dropped === null ? null : (

@@ -1,3 +1,5 @@
+import { median, robustScale } from '../statistics/robust';
+
 /** The straight line through the columns beside the spot: stray light that changes evenly over the picture is taken off by it. */
 export interface Background {
   at(x: number): number;
@@ -24,14 +26,6 @@ export function backgroundOf(mean: Float64Array, used: (x: number) => boolean, f
   };
 }
 
-const median = (values: Iterable<number>): number => {
-  const sorted = Float64Array.from(values).sort();
-  const half = sorted.length >> 1;
-  return sorted.length % 2 === 1 ? (sorted[half] as number) : ((sorted[half - 1] as number) + (sorted[half] as number)) / 2;
-};
-
-/** The normal distribution's standard deviation over its median absolute deviation (physics.md C7). */
-const OF_MEDIAN = 1.4826;
 const ROUNDS = 8;
 
 /**
@@ -47,7 +41,7 @@ export function roughBackground(mean: Float64Array): { line: Background; noise: 
     const net = mean.map((value, x) => value - line.at(x));
     const ofKept = net.filter((_, x) => now[x] === 1);
     const middle = median(ofKept);
-    noise = OF_MEDIAN * median(ofKept.map((value) => Math.abs(value - middle)));
+    noise = robustScale(ofKept.map((value) => value - middle));
     if (round === ROUNDS) return { line, noise };
     const next = Uint8Array.from(net, (value) => (value <= middle + 3 * noise ? 1 : 0));
     if (next.every((value, x) => value === now[x])) return { line, noise };

@@ -1,3 +1,4 @@
+import { robustScale } from '../statistics/robust';
 import type { SpotReading } from './read-spot';
 
 /** How the reading goes: rate, lost pictures, noise. */
@@ -64,17 +65,18 @@ export function figuresOf({ recent }: SpotHealth, nowMs: number): SpotFigures {
   return { rateHz: silent ? 0 : rateOf(recent), noisePx: noiseOf(recent), uPx };
 }
 
-/** Second differences of three pictures in a row: a constant velocity is no part of them, and their variance is six times that of one. */
+/**
+ * Second differences of three pictures in a row: a constant velocity is no part of them, and their variance is six times that of one. By their median,
+ * so that single knocks are no part of it either.
+ */
 function noiseOf(recent: readonly SeenFrame[]): number | null {
-  let sum = 0;
-  let count = 0;
+  const differences: number[] = [];
   for (let i = 2; i < recent.length; i += 1) {
     const [a, b, c] = [recent[i - 2], recent[i - 1], recent[i]].map((frame) => frame?.reading);
     if (a?.kind !== 'spot' || b?.kind !== 'spot' || c?.kind !== 'spot') continue;
-    sum += (a.px - 2 * b.px + c.px) ** 2;
-    count += 1;
+    differences.push(a.px - 2 * b.px + c.px);
   }
-  return count < FEWEST_TRIPLES ? null : Math.sqrt(sum / count / 6);
+  return differences.length < FEWEST_TRIPLES ? null : robustScale(Float64Array.from(differences)) / Math.sqrt(6);
 }
 
 /** Mean position of the last pictures, px; null where the last one showed no spot. */
