@@ -1,9 +1,8 @@
-import { Readable } from 'node:stream';
-import { CsvError, Parser } from 'csv-parse';
 import type { ImportMapping } from '@/shared/contracts/data';
 import type { SampleBatch } from '../interfaces/sample-store';
 import { readNumber, timeReader, UnreadableField } from './csv-fields';
-import { asUtf8 } from './csv-text';
+import { BrokenTable, recordsOf } from './csv-lines';
+import { textOf } from './csv-text';
 
 export interface CsvProblem {
   /** Line of the file, from 1; null for a problem of the whole file. */
@@ -44,48 +43,21 @@ export async function readCsv(
 ): Promise<CsvReading> {
   const reader = new RowReader(options.mapping, options.limits);
   const handover = new Handover(options.take ?? (async () => undefined));
-  const parser = Readable.from(asUtf8(chunks, options.mapping.encoding)).pipe(
-    new LineParser({
-      bom: true,
-      delimiter: options.mapping.delimiter,
-      relax_column_count: true,
-      relax_quotes: true,
-      skip_empty_lines: true,
-      comment: '#',
-      comment_no_infix: true,
-      trim: true,
-      max_record_size: 1_000_000,
-    }),
-  );
   try {
-    for await (const item of parser) {
-      const { record, line } = item as LineRecord;
-      reader.row(record, line);
-      if (reader.pending >= batchSize) await handover.give(reader.batch());
-    }
+    for await (const records of recordsOf(textOf(chunks, options.mapping.encoding), options.mapping.delimiter))
+      for (const { record, line } of records) {
+        reader.row(record, line);
+        if (reader.pending >= batchSize) await handover.give(reader.batch());
+      }
     await handover.give(reader.batch());
     await handover.end();
   } catch (error) {
-    if (!(error instanceof CsvError)) throw error;
-    reader.broken(error);
+    if (!(error instanceof BrokenTable)) throw error;
+    reader.problem(error.line, null, error.message);
   } finally {
-    parser.destroy();
     await handover.end().catch(() => undefined);
   }
   return reader.result();
-}
-
-interface LineRecord {
-  record: string[];
-  /** Line of the file on which it ends. */
-  line: number;
-}
-
-/** Tells the line of each record, without all else that the parser's own option would collect for each. */
-class LineParser extends Parser {
-  override push(record: unknown): boolean {
-    return super.push(record === null ? null : { record, line: this.info.lines });
-  }
 }
 
 /** Hands batches over one after another; while one is being taken the next is read. */
@@ -196,20 +168,9 @@ class RowReader {
     this.lastUtcMs = utcMs;
   }
 
-  private problem(row: number | null, column: string | null, message: string): void {
+  problem(row: number | null, column: string | null, message: string): void {
     this.problemCount += 1;
     if (this.problems.length < problemsKept) this.problems.push({ row, column, message });
-  }
-
-  broken(error: CsvError): void {
-    const line = typeof error.lines === 'number' ? error.lines : null;
-    const message =
-      error.code === 'CSV_QUOTE_NOT_CLOSED'
-        ? 'a quotation mark is opened and never closed'
-        : error.code === 'CSV_MAX_RECORD_SIZE'
-          ? 'a row is longer than a million characters: is the delimiter right?'
-          : 'the row cannot be parted into columns';
-    this.problem(line, null, message);
   }
 
   batch(): SampleBatch {

@@ -48,13 +48,9 @@ function decoded(head: Uint8Array, encoding: Encoding, whole: boolean): string |
   }
 }
 
-/** The bytes of a file as UTF-8. What cannot be decoded becomes U+FFFD, which no number and no time holds. */
-export async function* asUtf8(chunks: AsyncIterable<Uint8Array>, encoding: Encoding = 'utf-8'): AsyncGenerator<Uint8Array> {
-  if (encoding === 'utf-8') {
-    yield* chunks;
-    return;
-  }
+/** The text of a file, without its byte order mark, as its bytes come. What cannot be decoded becomes U+FFFD, which no number and no time holds. */
+export async function* textOf(chunks: AsyncIterable<Uint8Array>, encoding: Encoding = 'utf-8'): AsyncGenerator<string> {
   const decoder = new TextDecoder(decoders[encoding]);
-  for await (const chunk of chunks) yield Buffer.from(decoder.decode(chunk, { stream: true }));
-  yield Buffer.from(decoder.decode());
+  for await (const chunk of chunks) yield decoder.decode(chunk, { stream: true });
+  yield decoder.decode();
 }
