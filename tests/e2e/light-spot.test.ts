@@ -50,15 +50,14 @@ chapter('a region that is not in the picture is refused in words, and one that i
 });
 
 chapter('marks make the scale, with a residual from the third on', async () => {
-  for (const [px, mm] of [
-    [40, mmAt(40)],
-    [160, mmAt(160) + 0.03],
-    [280, mmAt(280)],
-  ] as const) {
+  for (const [index, [px, mm]] of [[40, mmAt(40)] as const, [160, mmAt(160) + 0.03] as const, [280, mmAt(280)] as const].entries()) {
     await hand.types('mark-mm', String(mm));
     await hand.taps('mark-spot');
-    const last = hand.page.getByTestId('spot-mark').last();
-    await last.getByLabel(/column/).fill(String(px));
+    await hand.page
+      .getByTestId('spot-mark')
+      .nth(index)
+      .getByLabel(/column/)
+      .fill(String(px));
   }
   await hand.reads('spot-scale', /off the line by \+0\.020 mm/);
   await hand.reads('scale-fit', /for each px/);
@@ -79,7 +78,8 @@ chapter('a token is made here, and samples flow into the channel', async () => {
     async () => new Set((await heard()).map(({ px }) => nearest(px))).size === levelsOf().length,
     'every place of the spot to be stored',
   );
-  await hand.page.keyboard.press('Escape');
+  await hand.taps('black-figures');
+  await hand.at('black-screen').waitFor({ state: 'detached' });
   await hand.taps('end-reading');
 });
 
