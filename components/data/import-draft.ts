@@ -1,4 +1,4 @@
-import type { ImportCheck, ImportMapping, ImportView } from '@/shared/contracts/data';
+import type { ImportCheck, ImportMapping, ImportView, SameInstant } from '@/shared/contracts/data';
 import { isTimeZone } from '@/shared/lib/is-time-zone';
 import type { MappingKey, RememberedMapping } from './remembered-mapping';
 
@@ -23,6 +23,8 @@ export interface ImportState {
   /** The mapping was filled in as last time. */
   remembered: boolean;
   channelName: string;
+  /** What becomes of a sample where the channel holds another value at its instant. */
+  sameInstant: SameInstant;
   /** The check of exactly the present mapping. */
   check: ImportCheck | null;
 }
@@ -31,6 +33,7 @@ export type ImportAction =
   | { kind: 'received'; imported: ImportView; remembered: RememberedMapping | null }
   | { kind: 'changed'; change: Partial<MappingDraft> }
   | { kind: 'named'; channelName: string }
+  | { kind: 'settled'; sameInstant: SameInstant }
   | { kind: 'checked'; check: ImportCheck }
   | { kind: 'another-file' };
 
@@ -40,6 +43,7 @@ export const noImport = (channelName: string): ImportState => ({
   ambiguous: [],
   remembered: false,
   channelName,
+  sameInstant: 'refuse',
   check: null,
 });
 
@@ -51,6 +55,8 @@ export function importReducer(state: ImportState, action: ImportAction): ImportS
       return state.draft === null ? state : { ...state, draft: { ...state.draft, ...action.change }, check: null };
     case 'named':
       return { ...state, channelName: action.channelName };
+    case 'settled':
+      return { ...state, sameInstant: action.sameInstant };
     case 'checked':
       return { ...state, check: action.check };
     case 'another-file':

@@ -2,8 +2,8 @@ import { useLocalSearchParams, type Href } from 'expo-router';
 import { View } from 'react-native';
 import { useLab, useLabQuery, useMay, wordsOf } from '@/components/api';
 import { TextLink } from '@/components/runs/recent-steps';
-import { Body, Button, Empty, Field, Icon, Label, Loading, Panel, ProblemNotice, Screen, Section } from '@/components/ui';
-import { readSamples } from '@/shared/contracts/data';
+import { Body, Button, Empty, Field, Icon, Label, Loading, Panel, ProblemNotice, Screen, Section, Select } from '@/components/ui';
+import { readSamples, type SameInstant } from '@/shared/contracts/data';
 import { getRun, type RunView } from '@/shared/contracts/runs';
 import { formatFixed } from '@/shared/lib/format-number';
 import { CheckPanel } from './check-panel';
@@ -11,7 +11,7 @@ import { FileDrop } from './file-drop';
 import { columnNames, previewRows, textOf } from './file-preview';
 import { MappingForm } from './mapping-form';
 import { PreviewTable } from './preview-table';
-import { useImport } from './use-import';
+import { useImport, type StoredImport } from './use-import';
 
 /** Brings deflection data of a run in from a text file. */
 export function ImportScreen() {
@@ -71,6 +71,12 @@ function ImportWork({ view, channelName }: { view: RunView; channelName: string 
 
 type Work = ReturnType<typeof useImport>;
 
+const sameInstants: { value: SameInstant; label: string }[] = [
+  { value: 'refuse', label: 'store nothing of the file' },
+  { value: 'keep', label: 'keep what is stored' },
+  { value: 'replace', label: 'replace it by the file’s' },
+];
+
 function ChosenFile({ work, view }: { work: Work; view: RunView }) {
   const { timeZone } = useLab();
   const { state, head } = work;
@@ -114,14 +120,26 @@ function ChosenFile({ work, view }: { work: Work; view: RunView }) {
           onChange={work.change}
         />
       </Section>
-      <View className="wide:w-[270px]">
-        <Field
-          label="Name of the channel"
-          value={state.channelName}
-          onChange={work.name}
-          hint="The same name adds to a channel imported earlier."
-          testID="channel-name"
-        />
+      <View className="gap-4 wide:flex-row">
+        <View className="wide:w-[270px]">
+          <Field
+            label="Name of the channel"
+            value={state.channelName}
+            onChange={work.name}
+            hint="The same name adds to a channel imported earlier."
+            testID="channel-name"
+          />
+        </View>
+        <View className="wide:w-[270px]">
+          <Select
+            label="Where it holds another value"
+            value={state.sameInstant}
+            options={sameInstants}
+            onChange={work.settle}
+            hint="Equal values at the same instant are stored once."
+            testID="same-instant"
+          />
+        </View>
       </View>
     </View>
   );
@@ -157,26 +175,16 @@ function Acts({ work }: { work: Work }) {
   );
 }
 
-function Stored({
-  runId,
-  stored,
-  known,
-  channel,
-  onAnother,
-}: {
-  runId: string;
-  stored: number;
-  known: number;
-  channel: { id: string; name: string };
-  onAnother: () => void;
-}) {
+function Stored({ runId, stored, known, other, sameInstant, channel, onAnother }: StoredImport & { runId: string; onAnother: () => void }) {
+  const count = (number: number) => formatFixed(number, { decimals: 0 });
   return (
     <Panel edge="good" className="gap-3" testID="import-stored">
       <View role="status" className="flex-row items-center gap-2">
         <Icon name="passed" tone="good" />
         <Body strong className="shrink">
-          {formatFixed(stored, { decimals: 0 })} samples stored in {channel.name}
-          {known > 0 ? `; ${formatFixed(known, { decimals: 0 })} were there already` : ''}.
+          {count(stored)} samples stored in {channel.name}
+          {known > 0 ? `; ${count(known)} were there already` : ''}
+          {other > 0 ? `, ${count(other)} with another value, which was ${sameInstant === 'replace' ? 'replaced' : 'kept'}` : ''}.
         </Body>
       </View>
       <View className="flex-row flex-wrap gap-2">

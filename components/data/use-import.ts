@@ -1,7 +1,7 @@
 import { useQueryClient } from '@tanstack/react-query';
 import { useReducer, useState } from 'react';
 import { call, labKey, useLab, wordsOf } from '@/components/api';
-import { beginImport, checkImport, commitImport, putImportContent, readSamples } from '@/shared/contracts/data';
+import { beginImport, checkImport, commitImport, putImportContent, readSamples, type SameInstant } from '@/shared/contracts/data';
 import { completeMapping, importReducer, noImport } from './import-draft';
 import { readRemembered, remember } from './remembered-mapping';
 
@@ -11,6 +11,14 @@ export interface ImportFailure {
   title: string;
   detail: string;
   errors: readonly { path: string; message: string }[];
+}
+
+export interface StoredImport {
+  stored: number;
+  known: number;
+  other: number;
+  sameInstant: SameInstant;
+  channel: { id: string; name: string };
 }
 
 type Step = 'sending' | 'checking' | 'storing' | null;
@@ -40,7 +48,7 @@ export function useImport(runId: string, channelName: string) {
   const [state, dispatch] = useReducer(importReducer, channelName, noImport);
   const { step, failure, attempt, forget } = useAttempt();
   const [head, setHead] = useState<ArrayBuffer>(() => new ArrayBuffer(0));
-  const [stored, setStored] = useState<{ stored: number; known: number; channel: { id: string; name: string } } | null>(null);
+  const [stored, setStored] = useState<StoredImport | null>(null);
 
   const mapping = state.draft === null ? null : completeMapping(state.draft);
   const importId = state.imported?.id ?? '';
@@ -61,6 +69,7 @@ export function useImport(runId: string, channelName: string) {
       }),
     change: (change: Parameters<typeof completeMapping>[0] extends infer D ? Partial<D> : never) => dispatch({ kind: 'changed', change }),
     name: (name: string) => dispatch({ kind: 'named', channelName: name }),
+    settle: (sameInstant: SameInstant) => dispatch({ kind: 'settled', sameInstant }),
     check: () =>
       attempt('checking', 'The file was not checked', async () => {
         if (!mapping?.mapping) return;
@@ -72,10 +81,10 @@ export function useImport(runId: string, channelName: string) {
         if (!mapping?.mapping) return;
         const { data } = await call(commitImport, {
           params: { labId, importId },
-          body: { mapping: mapping.mapping, channelName: state.channelName },
+          body: { mapping: mapping.mapping, channelName: state.channelName, sameInstant: state.sameInstant },
         });
         remember(labId, state.imported?.preview?.columns.map((column) => column.name) ?? [], mapping.mapping);
-        setStored({ stored: data.stored, known: data.known, channel: data.channel });
+        setStored({ ...data, sameInstant: state.sameInstant });
         await queries.invalidateQueries({ queryKey: labKey(labId, readSamples) });
       }),
     anotherFile: () => {

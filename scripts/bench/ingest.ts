@@ -80,7 +80,14 @@ async function ingest(database: BenchDatabase, rows: number): Promise<number> {
   const key = { labId, importId: file.id };
   await store.keepPieces(connection.db, key, Readable.from(csvOf(rows)));
   const window = { fromUtcMs: startUtcMs, toUtcMs: startUtcMs + rows * intervalMs };
-  const work = { ...key, channel: channelOf(`file of ${String(rows)}`), storedAt: startUtcMs, mapping, window };
+  const work = {
+    ...key,
+    channel: channelOf(`file of ${String(rows)}`),
+    storedAt: startUtcMs,
+    mapping,
+    window,
+    sameInstant: 'refuse' as const,
+  };
   const limits = { greatestSpan: 0.06, nowUtcMs: startUtcMs + rows * intervalMs };
   const breathe = () => new Promise<void>((resolve) => void setImmediate(resolve));
   const cost = await seconds(async () => {

@@ -38,6 +38,10 @@ export const importMappingSchema = z.strictObject({
 });
 export type ImportMapping = z.infer<typeof importMappingSchema>;
 
+/** What becomes of a sample of the file where the channel holds another value at the same instant: nothing at all is stored, the stored one stays, the new one counts. */
+export const sameInstantSchema = z.enum(['refuse', 'keep', 'replace']);
+export type SameInstant = z.infer<typeof sameInstantSchema>;
+
 /** Row numbers count lines of the file from 1, as an editor shows them. */
 export const importProblemSchema = z.strictObject({ row: z.number().int().nullable(), column: z.string().nullable(), message: z.string() });
 
@@ -127,8 +131,13 @@ export const commitImport = defineRoute({
   access: 'data.import',
   status: 200,
   idempotent: true,
-  body: z.strictObject({ mapping: importMappingSchema, channelName: z.string().min(1).max(80) }),
-  response: z.strictObject({ channel: channelViewSchema, stored: z.number().int(), known: z.number().int() }),
+  body: z.strictObject({
+    mapping: importMappingSchema,
+    channelName: z.string().min(1).max(80),
+    sameInstant: sameInstantSchema.default('refuse'),
+  }),
+  /** `known`: instants that the channel held already, `other` of them with another value. */
+  response: z.strictObject({ channel: channelViewSchema, stored: z.number().int(), known: z.number().int(), other: z.number().int() }),
   problems: ['invalid-input', 'not-found', 'unreadable-data', 'not-possible-now', 'already-exists'],
 });
 /** Both ends belong to the window; without one it reaches as far as the channel does. */

@@ -103,6 +103,13 @@ function channelRefusal(channel: store.ChannelRecord, unit: string): ProblemErro
   );
 }
 
+const frozenRefusal = (channelName: string, atUtcMs: number) =>
+  new ProblemError(
+    'already-exists',
+    `Nothing was stored: at ${isoOf(atUtcMs)} the file has another value than ${channelName}, and a frozen evaluation stands on that night. Keep what is stored, or choose another channel name.`,
+    [{ path: 'sameInstant', message: 'keep what is stored' }],
+  );
+
 /** What the problems of a file say when it was to be stored. */
 function unreadable(file: store.ImportRecord, reading: Awaited<ReturnType<typeof readImport>>): ProblemError {
   const items = reading.problems.map(({ row, column, message }) => ({
@@ -157,7 +164,7 @@ export const dataRoutes = [
     assertReceived(file);
     assertMapping(body.mapping);
     const run = await loadRun(services, file.labId, file.runId);
-    const { channelName, mapping } = body;
+    const { channelName, mapping, sameInstant } = body;
     const nowUtcMs = services.clock.utcMs();
     const channel: store.WantedChannel = {
       labId: run.labId,
@@ -171,12 +178,15 @@ export const dataRoutes = [
       createdAt: nowUtcMs,
     };
     const window = { fromUtcMs: run.startedAt ?? run.createdAt, toUtcMs: run.endedAt ?? nowUtcMs };
-    const also = (handle: Handle, stored: number) =>
-      enterAudit(handle, context, { kind: 'run.data-imported', data: { runId: run.id, importId: file.id, channelName, stored } });
+    const also = (handle: Handle, { stored, other }: { stored: number; other: number }) =>
+      enterAudit(handle, context, {
+        kind: 'run.data-imported',
+        data: { runId: run.id, importId: file.id, channelName, stored, ...(other === 0 ? {} : { other, sameInstant }) },
+      });
     try {
       const done = await store.storeImport(
         services.database,
-        { labId: file.labId, importId: file.id, channel, storedAt: nowUtcMs, mapping, window, also },
+        { labId: file.labId, importId: file.id, channel, storedAt: nowUtcMs, mapping, window, sameInstant, also },
         async (take) => {
           const reading = await readImport(services, { file, run, mapping }, take);
           if (!reading.ok) throw unreadable(file, reading);
@@ -185,11 +195,12 @@ export const dataRoutes = [
       return { ...done, channel: channelViewOf(done.channel) };
     } catch (error) {
       if (error instanceof store.UnsuitableChannelError) throw channelRefusal(error.channel, mapping.unit);
+      if (error instanceof store.FrozenSamplesError) throw frozenRefusal(channelName, error.atUtcMs);
       if (!(error instanceof store.ConflictingSamplesError)) throw error;
       throw new ProblemError(
         'already-exists',
-        `Nothing was stored: the channel ${channelName} holds another value at ${isoOf(error.atUtcMs)} already. Choose another channel name.`,
-        [{ path: 'channelName', message: `a name other than ${channelName}` }],
+        `Nothing was stored: the channel ${channelName} holds another value at ${isoOf(error.atUtcMs)} already. Choose another channel name, or say which of both counts.`,
+        [{ path: 'sameInstant', message: 'keep what is stored, or replace it' }],
       );
     }
   }),
