@@ -147,7 +147,11 @@ export async function storeImport(
       const { stored, known } = await appendSamples(client, key, batch);
       if (known > 0 && sameInstant === 'refuse') await assertSameValues(client, key, batch);
       else if (known > 0)
-        sum.other += await settleOthers(client, { ...key, rigId: channel.rigId }, { batch, replace: sameInstant === 'replace' });
+        sum.other += await settleOthers(
+          client,
+          { ...key, rigId: channel.rigId, runId: channel.runId },
+          { batch, replace: sameInstant === 'replace' },
+        );
       sum.stored += stored;
       sum.known += known;
     });
@@ -192,7 +196,7 @@ export class FrozenSamplesError extends Error {
 /** How many samples of the batch have another value than the channel holds at their instant; `replace`: from then on theirs counts, and the summaries follow by their triggers. */
 async function settleOthers(
   client: PoolClient,
-  channel: { labId: string; channelId: string; rigId: string },
+  channel: { labId: string; channelId: string; rigId: string; runId: string | null },
   { batch, replace }: { batch: SampleBatch; replace: boolean },
 ): Promise<number> {
   const { labId, channelId } = channel;
@@ -203,10 +207,11 @@ async function settleOthers(
     return (await client.query<{ n: number }>(`select count(*)::int as n from samples, ${batchRows} where ${other}`, own)).rows[0]?.n ?? 0;
   const frozen = await client.query<{ ms: number }>(
     `select (extract(epoch from samples.at) * 1000)::double precision as ms from samples, ${batchRows}, runs
-     where ${other} and runs.lab_id = $1 and runs.rig_id = $5 and samples.at between coalesce(runs.started_at, runs.created_at) and coalesce(runs.ended_at, 'infinity')
+     where ${other} and runs.lab_id = $1 and runs.rig_id = $5 and (runs.id = $6::uuid or $6::uuid is null and not runs.rehearsal)
+       and samples.at between coalesce(runs.started_at, runs.created_at) and coalesce(runs.ended_at, 'infinity')
        and exists (select 1 from evaluations where evaluations.lab_id = $1 and evaluations.run_id = runs.id and evaluations.frozen_at is not null)
      order by samples.at limit 1`,
-    [...own, channel.rigId],
+    [...own, channel.rigId, channel.runId],
   );
   if (frozen.rows[0] !== undefined) throw new FrozenSamplesError(frozen.rows[0].ms);
   return (await client.query(`update samples set value = batch.value from ${batchRows} where ${other}`, own)).rowCount ?? 0;
