@@ -132,11 +132,11 @@ function ChosenFile({ work, view }: { work: Work; view: RunView }) {
         </View>
         <View className="wide:w-[270px]">
           <Select
-            label="Where it holds another value"
+            label="Where the channel holds another"
             value={state.sameInstant}
             options={sameInstants}
             onChange={work.settle}
-            hint="Equal values at the same instant are stored once."
+            hint="Another value at the same instant. Equal ones are stored once."
             testID="same-instant"
           />
         </View>
