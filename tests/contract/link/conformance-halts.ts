@@ -45,8 +45,9 @@ export function haltsConformance(_maker: BenchMaker, scene: Scene): void {
     const ended = await scene.watch.get('motion-ended', { of: move });
     expect(ended.cause).toBe('lease');
     expect(lapsed.at.utcMs - began.at.utcMs).toBeLessThanOrEqual(4_000);
-    // From 30°/s with 60°/s²: half a second.
-    expect((ended.at.utcMs - lapsed.at.utcMs) / 1000).toBeCloseTo(0.5, 2);
+    // From 30°/s with 60°/s²: half a second, as far as both instants are known where the line is a real one.
+    const known = 0.005 + 3 * (lapsed.at.uS + ended.at.uS);
+    expect(Math.abs((ended.at.utcMs - lapsed.at.utcMs) / 1000 - 0.5)).toBeLessThan(known);
     expect(scene.watch.all('lost')).toEqual([]);
     expect((await scene.watch.get('refused', { of: scene.watch.move(0) })).code).toBe('not-renewed');
   });
