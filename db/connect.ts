@@ -12,7 +12,8 @@ export interface Connection {
   pool: Pool;
   /**
    * One transaction for work that needs the bare client (COPY) beside the handle; both speak in it. No statement
-   * timeout holds in it, for bulk work takes its time.
+   * timeout holds in it, for bulk work takes its time; one that says nothing for half a minute is ended, so that a process that was
+   * frozen in it keeps no channel locked.
    */
   bulk<T>(work: (client: PoolClient, handle: Handle) => Promise<T>): Promise<T>;
   close(): Promise<void>;
@@ -78,12 +79,14 @@ function givingBack(db: NodePgDatabase<Schema>, pool: Pool): NodePgDatabase<Sche
   return db;
 }
 
+const bulkIdleMs = 30_000;
+
 async function inBulkTransaction<T>(pool: Pool, work: (client: PoolClient, handle: Handle) => Promise<T>): Promise<T> {
   const client = await pool.connect();
   let broken: Error | undefined;
   try {
     await client.query('begin');
-    await client.query('set local statement_timeout = 0');
+    await client.query(`set local statement_timeout = 0; set local idle_in_transaction_session_timeout = ${bulkIdleMs}`);
     const result = await work(client, drizzle(client, { schema }));
     await client.query('commit');
     return result;

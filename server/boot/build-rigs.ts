@@ -64,6 +64,11 @@ export interface RigSide {
   soak: MotorSoak;
 }
 
+const processMarks = (stateDir: string, log: Logger) =>
+  new ProcessMarks(join(stateDir, 'processes'), (error) =>
+    log.warn({ err: error }, 'what is known of other servers of this machine could not be read or written'),
+  );
+
 /** All that has to do with the rigs: who may move them, their lines, and the engine that drives runs. */
 export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide {
   const { log, background, samples, samplesOf, onLine, onTaken, onDatabase } = wiring;
@@ -75,7 +80,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     guided: (): GuidedMoves => guided,
   });
   const clockOf = steadyClocks(clock, (rigId) => supervisor.drives(rigId));
-  const processes = new ProcessMarks(join(parts.config.stateDir, 'processes'));
+  const processes = processMarks(parts.config.stateDir, log);
   if (parts.config.roles.includes('rig')) processes.leave(wiring.holder, clock.utcMs());
   const leases = new LeaseKeeper({
     ...{ database, clock, log, onTaken, processes },

@@ -75,7 +75,6 @@ class Life {
     const { db } = services.database;
     const { roles } = services.config;
     await services.post?.open();
-    await keepHouse(db, services.clock.utcMs());
     if (roles.includes('rig')) {
       // From the first lease on: to take many rigs up may last longer than a lease.
       inside.leases.renewRegularly();
@@ -83,6 +82,8 @@ class Life {
       this.refreshRegularly();
     }
     inside.tellTakenUp();
+    // What could be slow comes after the rigs.
+    inside.background.add(keepHouse(db, services.clock.utcMs()), 'keeping house');
     if (roles.includes('worker')) inside.crew.start();
     if (roles.includes('rig')) inside.watch.start();
     if (this.parts.overrides?.ticks ?? services.config.mode !== 'test') this.ticks = startTicks(this.chores(), services.log);

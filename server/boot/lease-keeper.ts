@@ -95,8 +95,12 @@ export class LeaseKeeper {
     await this.working;
     const { database, clock, holder } = this.parts;
     this.epochs.clear();
-    await giveRigLeases(database.db, { holder, nowUtcMs: clock.utcMs() }).catch(() => undefined);
-    this.parts.processes.forget(holder);
+    // Where they could not be given back, the mark lets the next process take them once this one has ended.
+    const given = await giveRigLeases(database.db, { holder, nowUtcMs: clock.utcMs() }).then(
+      () => true,
+      () => false,
+    );
+    if (given) this.parts.processes.forget(holder);
   }
 
   /** `gone`: the driver that is known to have ended; found out here where it is not given. */

@@ -17,7 +17,10 @@ export type ProcessMark = z.infer<typeof markSchema>;
 export interface ProcessTable {
   /** Null where nothing can be told for sure. */
   own(): ProcessMark | null;
-  /** When the process with this number began; null: there is none, or it has ended and is not buried yet. */
+  /**
+   * When the process with this number began; null: there is none, or it has ended and is not buried yet.
+   * @throws where that could not be found out
+   */
   startTicksOf(pid: number): string | null;
 }
 
@@ -26,39 +29,54 @@ const oldMs = 86_400_000;
 /**
  * Which process has which name on the leases of rigs, one small file each in the state folder: the next server can tell for sure that a
  * killed one is gone, and need not wait for the end of its leases. Wherever that is not sure (another machine, another container, no file)
- * a name counts as alive.
+ * a name counts as alive, and so it does where the disk is full or nothing can be read: a server starts without marks too.
  */
 export class ProcessMarks {
   constructor(
     private readonly folder: string,
+    private readonly onError: (error: unknown) => void,
     private readonly table: ProcessTable = linuxProcesses,
-  ) {
-    mkdirSync(folder, { recursive: true });
-  }
+  ) {}
 
-  /** Writes down that this process is `name`. Marks that are a day old and of no living process are swept out. */
+  /** Writes down that this process is `name`. Marks that are a day old and of no process that is known to live are swept out. */
   leave(name: string, nowUtcMs: number): void {
-    for (const other of readdirSync(this.folder)) {
-      const path = join(this.folder, other);
-      const old = nowUtcMs - (statSync(path, { throwIfNoEntry: false })?.mtimeMs ?? nowUtcMs) > oldMs;
-      if (old && !this.isAlive(this.read(path))) rmSync(path, { force: true });
+    try {
+      mkdirSync(this.folder, { recursive: true });
+      this.sweep(nowUtcMs);
+      const own = this.table.own();
+      if (own !== null) writeFileSync(this.path(name), JSON.stringify(own), { mode: 0o600 });
+    } catch (error) {
+      this.onError(error);
     }
-    const own = this.table.own();
-    if (own !== null) writeFileSync(this.path(name), JSON.stringify(own), { mode: 0o600 });
   }
 
   /** Whether the process of that name ran here and has ended, without any doubt. */
   isGone(name: string): boolean {
     const mark = this.read(this.path(name));
-    return mark !== null && this.isOfHere(mark) && !this.isAlive(mark);
+    try {
+      return mark !== null && this.isOfHere(mark) && this.table.startTicksOf(mark.pid) !== mark.startTicks;
+    } catch (error) {
+      this.onError(error);
+      return false;
+    }
   }
 
   forget(name: string): void {
-    rmSync(this.path(name), { force: true });
+    try {
+      rmSync(this.path(name), { force: true });
+    } catch (error) {
+      this.onError(error);
+    }
   }
 
-  private isAlive(mark: ProcessMark | null): boolean {
-    return mark !== null && this.isOfHere(mark) && this.table.startTicksOf(mark.pid) === mark.startTicks;
+  private sweep(nowUtcMs: number): void {
+    for (const file of readdirSync(this.folder)) {
+      const path = join(this.folder, file);
+      const old = nowUtcMs - (statSync(path, { throwIfNoEntry: false })?.mtimeMs ?? nowUtcMs) > oldMs;
+      const mark = this.read(path);
+      const ofHere = mark !== null && this.isOfHere(mark);
+      if (old && (!ofHere || this.isGone(file.replace(/\.json$/, '')))) rmSync(path, { force: true });
+    }
   }
 
   private isOfHere({ bootId, namespace }: ProcessMark): boolean {
@@ -98,8 +116,10 @@ const linuxProcesses: ProcessTable = {
       const stat = readFileSync(`/proc/${String(pid)}/stat`, 'utf8');
       const fields = stat.slice(stat.lastIndexOf(')') + 2).split(' ');
       return fields[STATE] === 'Z' || fields[STATE] === 'X' ? null : (fields[START_TICKS] ?? null);
-    } catch {
-      return null;
+    } catch (error) {
+      // No such process (proc(5)). Anything else, too many open files say, tells nothing of it.
+      if (error instanceof Error && 'code' in error && (error.code === 'ENOENT' || error.code === 'ESRCH')) return null;
+      throw error;
     }
   },
 };

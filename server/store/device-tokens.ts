@@ -68,7 +68,8 @@ export class ConflictingBatchError extends Error {
 }
 
 /**
- * Stores the batches of one request, all or none; what is stored already is counted and left as it is.
+ * Stores the batches of one request, all or none; what is stored already is counted and left as it is. Channels are locked in the order of their ids, so that
+ * no two requests wait for each other.
  * @throws ConflictingBatchError where an instant is known with another value
  */
 export function storeBatches(
@@ -78,7 +79,7 @@ export function storeBatches(
 ): Promise<{ stored: number; known: number }> {
   return connection.bulk(async (client) => {
     const sum = { stored: 0, known: 0 };
-    for (const { channelId, ...batch } of batches) {
+    for (const { channelId, ...batch } of [...batches].sort((a, b) => (a.channelId < b.channelId ? -1 : 1))) {
       const { stored, known } = await appendSamples(client, { labId, channelId }, batch);
       if (known > 0) await assertSame(() => assertSameValues(client, { labId, channelId }, batch), channelId);
       sum.stored += stored;

@@ -47,6 +47,8 @@ class Room {
   }
 }
 
+const longestWaitMs = 8_000;
+
 interface ChannelKey {
   labId: string;
   channelId: string;
@@ -83,14 +85,16 @@ function assertUsable({ utcMs, value }: SampleBatch): void {
 
 /**
  * In place of a foreign key: the channel is of this lab and stays there until the transaction ends. Who adds to the same channel meanwhile waits, so that
- * its summaries are made of all that is there.
+ * its summaries are made of all that is there, but not for ever: whoever asked is told to come again.
  */
 async function assertChannel(client: PoolClient, { labId, channelId }: ChannelKey): Promise<void> {
+  await client.query(`set local lock_timeout = '${longestWaitMs}ms'`);
   const known =
     isKey(labId) &&
     isKey(channelId) &&
     (await client.query('select 1 from channels where lab_id = $1 and id = $2 for no key update', [labId, channelId])).rowCount === 1;
   if (!known) throw new UnusableBatchError(`there is no channel ${channelId} in this lab`);
+  await client.query('set local lock_timeout = default');
 }
 
 async function insertFew(client: PoolClient, { labId, channelId }: ChannelKey, batch: SampleBatch): Promise<number> {
