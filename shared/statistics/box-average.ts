@@ -17,14 +17,18 @@ const gapFactor = 3;
  * Averages samples over boxes of about `width` (unit of `t`). Averaging n equally spaced samples leaves the damped
  * oscillation of the dwell model exact: offset and slope stay and the amplitude is multiplied by one complex number, as long as n is the
  * same in all boxes. So every box holds the same number of consecutive samples, and the few left over at the ends of a run are
- * dropped, half at either end. Series with so many gaps that this would cost over a fifth are cut by time instead.
+ * dropped, half at either end. Series with so many gaps that this would cost over a fifth of the samples, or a twentieth of the time, are cut by
+ * time instead: a stretch with fewer samples a second than the rest must not be lost.
  */
 export function boxAverage(t: ArrayLike<number>, y: ArrayLike<number>, width: number): BoxAverages {
   const interval = medianInterval(t);
   const size = interval > 0 ? Math.max(1, Math.floor(width / interval + 1e-6)) : 1;
-  const equal = collect(t, y, equalBoxes(t, size, gapFactor * interval));
-  if (size === 1 || equal.samples >= 0.8 * t.length) return equal;
-  return collect(t, y, timeBoxes(t, width));
+  const equal = equalBoxes(t, size, gapFactor * interval);
+  const kept = equal.reduce((sum, [from, to]) => sum + to - from, 0);
+  if (size === 1) return collect(t, y, equal);
+  const byTime = timeBoxes(t, width);
+  const isWhole = kept >= 0.8 * t.length && untouched(byTime, equal) <= 0.05 * byTime.length;
+  return collect(t, y, isWhole ? equal : byTime);
 }
 
 export function medianInterval(t: ArrayLike<number>): number {
@@ -59,6 +63,15 @@ function timeBoxes(t: ArrayLike<number>, width: number): Box[] {
     from = i;
   }
   return boxes;
+}
+
+/** How many boxes by time, but for the first and the last one, hold no sample of the others. Both are in the order of time. */
+function untouched(byTime: readonly Box[], others: readonly Box[]): number {
+  let next = 0;
+  return byTime.slice(1, -1).filter(([from, to]) => {
+    while (next < others.length && (others[next] as Box)[1] <= from) next += 1;
+    return next === others.length || (others[next] as Box)[0] >= to;
+  }).length;
 }
 
 function collect(t: ArrayLike<number>, y: ArrayLike<number>, boxes: readonly Box[]): BoxAverages {

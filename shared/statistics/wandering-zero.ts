@@ -1,7 +1,7 @@
 import type { SidedValue } from './drift';
 
 /**
- * How far a weighted sum of dwells is uncertain when the zero walks at random beside the noise that each dwell has of its own. A dwell's value is
+ * How far a weighted sum of dwells is uncertain when the zero drifts steadily and walks at random beside the noise that each dwell has of its own. A dwell's value is
  * the mean of the walk over it: its variance is that at mid-dwell less a sixth of the dwell's length. Differences of neighbours then have a
  * covariance with one line beside the diagonal, so everything takes as many steps as there are dwells.
  */
@@ -30,7 +30,7 @@ export function walkScatter(series: readonly SidedValue[], weights: readonly num
   const shares = sharesOf(weights);
   const { diagonal, beside } = best.covariance;
   const spread = shares.reduce((sum, share, k) => sum + share * (share * at(diagonal, k) + 2 * (shares[k + 1] ?? 0) * (beside[k] ?? 0)), 0);
-  return { u: Math.sqrt(best.variance * spread), degreesOfFreedom: series.length - 3 };
+  return { u: Math.sqrt(best.variance * spread), degreesOfFreedom: series.length - 4 };
 }
 
 /** From each dwell to the next. */
@@ -69,27 +69,36 @@ interface Fit {
   criterion: number;
 }
 
-/** The difference of the sides by generalised least squares from the steps, with the walk's share given. */
+/** The difference of the sides and the steady drift by generalised least squares from the steps, with the walk's share given. */
 function fitOf({ change, turn, interval, sixth }: Steps, ratio: number): Fit {
   const covariance: Tridiagonal = {
     diagonal: interval.map((of, k) => 2 + ratio * (of - at(sixth, k) - at(sixth, k + 1))),
     beside: interval.slice(1).map((_, k) => ratio * at(sixth, k + 1) - 1),
   };
-  let [logDeterminant, turns, both, changes] = [0, 0, 0, 0];
-  let [pivot, leftTurn, leftChange] = [NaN, 0, 0];
-  covariance.diagonal.forEach((own, k) => {
-    const factor = k === 0 ? 0 : at(covariance.beside, k - 1) / pivot;
-    pivot = k === 0 ? own : own - factor * at(covariance.beside, k - 1);
-    leftTurn = at(turn, k) - factor * leftTurn;
-    leftChange = at(change, k) - factor * leftChange;
+  const { logDeterminant, product } = whitened(covariance, [turn, interval, change]);
+  const [turns, drifts, both] = [product(0, 0), product(1, 1), product(0, 1)];
+  const determinant = turns * drifts - both * both;
+  const [ofTurn, ofDrift] = [product(0, 2), product(1, 2)];
+  const explained = (drifts * ofTurn ** 2 - 2 * both * ofTurn * ofDrift + turns * ofDrift ** 2) / determinant;
+  const squares = product(2, 2) - explained;
+  const freedom = change.length - 2;
+  return { covariance, variance: squares / freedom, criterion: freedom * Math.log(squares) + logDeterminant + Math.log(determinant) };
+}
+
+/** Products of columns over the inverse of a covariance, by elimination without its square root. */
+function whitened({ diagonal, beside }: Tridiagonal, columns: readonly (readonly number[])[]) {
+  const sums = columns.map(() => columns.map(() => 0));
+  let [logDeterminant, pivot] = [0, NaN];
+  let left = columns.map(() => 0);
+  diagonal.forEach((own, k) => {
+    const factor = k === 0 ? 0 : at(beside, k - 1) / pivot;
+    pivot = k === 0 ? own : own - factor * at(beside, k - 1);
+    left = left.map((last, column) => at(columns[column] as number[], k) - factor * last);
     logDeterminant += Math.log(pivot);
-    turns += (leftTurn * leftTurn) / pivot;
-    both += (leftTurn * leftChange) / pivot;
-    changes += (leftChange * leftChange) / pivot;
+    for (const [row, sum] of sums.entries())
+      for (const column of sum.keys()) sum[column] = at(sum, column) + (at(left, row) * at(left, column)) / pivot;
   });
-  const squares = changes - (both * both) / turns;
-  const freedom = change.length - 1;
-  return { covariance, variance: squares / freedom, criterion: freedom * Math.log(squares) + logDeterminant + Math.log(turns) };
+  return { logDeterminant, product: (row: number, column: number) => at(sums[row] as number[], column) };
 }
 
 /** Σ weight · value as Σ share · step. */
