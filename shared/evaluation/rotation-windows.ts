@@ -21,28 +21,52 @@ const sameAngleDeg = 1;
 
 /** The rotations of a log that hold a whole turn at least. Turning back afterwards, which frees the cables, is not among them. */
 export function rotationWindows(steps: readonly StepRow[], rig: RigDocument): RotationWindow[] {
-  const rotations = steps.filter(({ kind }) => kind === 'rotate');
-  const found: RotationWindow[] = [];
-  let out: StepRow | null = null;
-  for (const row of rotations) {
-    if (out !== null && turnsBack(out, row)) out = null;
-    else {
-      out = row;
-      const one = windowOf(row, rig);
-      if (one !== null) found.push(one);
-    }
-  }
-  return found;
+  return withoutTurningBack(steps.filter(({ kind }) => kind === 'rotate')).flatMap((row) => windowOf(row, rig) ?? []);
 }
 
-function turnsBack(out: StepRow, row: StepRow): boolean {
-  if (row.angleStartDeg === null || row.angleEndDeg === null || out.angleStartDeg === null || out.angleEndDeg === null) return false;
-  return (
-    Math.abs(row.angleStartDeg - out.angleEndDeg) <= sameAngleDeg &&
-    Math.abs(row.angleEndDeg - out.angleStartDeg) <= sameAngleDeg &&
-    out.angleStartDeg !== out.angleEndDeg
-  );
+/** A way out, in one row or in several where it was held, and how far it has been turned back. */
+interface WayOut {
+  fromDeg: number;
+  /** Where the table stands. */
+  atDeg: number;
+  sense: number;
+  /** Rows against its sense so far: they are turning back if they end where it began. */
+  back: StepRow[];
 }
+
+function withoutTurningBack(rotations: readonly StepRow[]): StepRow[] {
+  const found: StepRow[] = [];
+  let out: WayOut | null = null;
+  for (const row of rotations) {
+    const { angleStartDeg, angleEndDeg } = row;
+    if (angleStartDeg === null || angleEndDeg === null || angleStartDeg === angleEndDeg) continue;
+    const sense = Math.sign(angleEndDeg - angleStartDeg);
+    const goesOn: boolean = out !== null && isNear(angleStartDeg, out.atDeg) && (out.back.length === 0 || sense !== out.sense);
+    if (out === null || !goesOn) {
+      found.push(...evaluatedOf(out), row);
+      out = { fromDeg: angleStartDeg, atDeg: angleEndDeg, sense, back: [] };
+      continue;
+    }
+    out.atDeg = angleEndDeg;
+    if (sense === out.sense) found.push(row);
+    else out.back.push(row);
+    if (out.back.length === 0) continue;
+    if (isNear(angleEndDeg, out.fromDeg)) out = null;
+    else if ((angleEndDeg - out.fromDeg) * out.sense < 0) {
+      found.push(...out.back);
+      out = { fromDeg: out.back[0]?.angleStartDeg ?? angleStartDeg, atDeg: angleEndDeg, sense, back: [] };
+    }
+  }
+  return [...found, ...evaluatedOf(out)];
+}
+
+/** Rows against a way out that never came back to where it began: turns of their own, unless the way back was broken off. */
+function evaluatedOf(out: WayOut | null): StepRow[] {
+  const last = out?.back.at(-1);
+  return out === null || last?.outcome === 'cut short' || last?.outcome === 'failed' ? [] : out.back;
+}
+
+const isNear = (aDeg: number, bDeg: number): boolean => Math.abs(aDeg - bDeg) <= sameAngleDeg;
 
 /** The last whole turns before the table slows down, when the ringing of its start has died most. */
 function windowOf(row: StepRow, rig: RigDocument): RotationWindow | null {

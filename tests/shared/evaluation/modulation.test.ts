@@ -158,6 +158,39 @@ test('turning back is not evaluated: what it shows does not count', () => {
   expect(relativeDifference(result.G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
 });
 
+/** What is shown from that second on is no deflection at all. */
+const silentFrom = (fromS: number, anglesTurns: number[]): NightPlan => ({
+  ...base,
+  anglesDeg: anglesTurns.map((turns) => 90 + 360 * turns),
+  reading: (angle, tS) => (tS > fromS ? 0 : angle),
+});
+
+test.each<[string, NightPlan, number]>([
+  ['a way out that was held and went on', silentFrom(3690, [0, 2.4, 4, 0]), 3],
+  ['a way back that was held and went on', silentFrom(2760, [0, 3, 1.6, 0]), 2],
+])('turning back is not evaluated after %s', (_name, plan, turns) => {
+  const { G, modulation } = evaluated(plan);
+  expect(modulation?.turns).toBe(turns);
+  expect(relativeDifference(G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
+});
+
+test('a way back that was broken off is not evaluated', () => {
+  const plan = silentFrom(2760, [0, 3, 1.6]);
+  const cut: NightPlan = {
+    ...plan,
+    row: (row) => (row.seq === 3 ? { kind: 'rotate', outcome: 'cut short' } : (plan.row?.(row) ?? {})),
+  };
+  const { G, modulation } = evaluated(cut);
+  expect(modulation?.turns).toBe(2);
+  expect(relativeDifference(G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
+});
+
+test('turns against turns that do not come back to where those began are turns of their own', () => {
+  const { G, modulation } = evaluated({ ...base, anglesDeg: [90, 90 + 3 * 360, 90 - 2 * 360] });
+  expect(modulation?.turns).toBe(6);
+  expect(relativeDifference(G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
+});
+
 test('a reversed scale is told by the sign of G, and that there are no near and far dwells is nothing to warn of', () => {
   const swung: NightPlan = { ...base, anglesDeg: [60, 90, 90 + 3 * 360], reading: (angle) => -angle };
   const kindOf = { 1: 'swing', 3: 'rotate' } as const;
