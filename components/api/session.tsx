@@ -140,7 +140,7 @@ export function useLab(): MembershipView {
 const rolesInWords: Record<Act, string> = {
   'members.manage': 'Only an owner may manage members.',
   'lab.settings': 'Only an owner may change the settings of the lab.',
-  'tokens.manage': 'Only an owner may make and revoke device tokens.',
+  'tokens.manage': 'Only an owner may make and revoke device tokens, and add and remove brokers.',
   'rig.edit': 'Only a keeper or an owner may change a rig.',
   'rig.arm': 'Only an operator, a keeper or an owner may arm a rig.',
   'cautions.sign': 'Only an operator, a keeper or an owner signs the cautions of a rig.',

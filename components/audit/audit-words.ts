@@ -7,6 +7,7 @@ const areas: Readonly<Record<string, string>> = {
   alarm: 'Alarms',
   'calendar-feed': 'Calendar feeds',
   'device-token': 'Device tokens',
+  broker: 'Brokers',
   'door-card': 'Door cards',
   job: 'Given-up jobs',
   lab: 'The lab',

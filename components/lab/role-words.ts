@@ -4,7 +4,7 @@ import { acts, roles, type Act, type Role } from '@/shared/contracts/roles';
 const actWords: Record<Act, string> = {
   'members.manage': 'Manage members and invitations',
   'lab.settings': 'Change the settings of the lab',
-  'tokens.manage': 'Make and revoke device tokens',
+  'tokens.manage': 'Make and revoke device tokens, add and remove brokers',
   'rig.edit': 'Change a rig, its link and its mass sets',
   'rig.arm': 'Arm a rig on site',
   'cautions.sign': 'Sign the cautions of a rig',

@@ -11,6 +11,7 @@ import type { RigView } from '@/shared/contracts/rigs';
 import { formatAgo } from '@/shared/lib/format-duration';
 import { formatSignificant } from '@/shared/lib/format-number';
 import { formatDayAndClock } from '@/shared/lib/format-time';
+import { BrokersPanel } from './brokers-panel';
 import { DeviceSheet } from './device-sheet';
 
 type Devices = ResponseOf<typeof listDevices>;
@@ -49,6 +50,7 @@ export function DevicesPanel({ rig }: { rig: RigView }) {
           testID="to-light-spot"
         />
       </Panel>
+      <BrokersPanel rig={rig} />
       {making ? (
         <DeviceSheet
           rig={rig}

@@ -13,6 +13,7 @@ import {
   uniqueIndex,
 } from 'drizzle-orm/pg-core';
 import type * as z from 'zod';
+import type { BrokerStatus, BrokerTopic } from '../../shared/contracts/brokers';
 import type { importMappingSchema, importPreviewSchema } from '../../shared/contracts/data';
 import type { GBasis } from '@/shared/evaluation/g-basis';
 import type { EvaluationResult, FitCurve } from '../../shared/evaluation/result';
@@ -78,6 +79,34 @@ export const deviceTokens = pgTable(
     foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
     uniqueIndex('device_tokens_hash').on(table.tokenHash),
     index('device_tokens_rig').on(table.labId, table.rigId),
+  ],
+);
+
+/** An MQTT broker whose messages fill channels of a rig. */
+export const brokers = pgTable(
+  'brokers',
+  {
+    labId: key('lab_id').notNull(),
+    id: key('id')
+      .notNull()
+      .default(sql`gen_random_uuid()`),
+    rigId: key('rig_id').notNull(),
+    address: text('address').notNull(),
+    /** Never told to anybody but the broker; gone with its removal. */
+    userName: text('user_name'),
+    password: text('password'),
+    topics: json('topics').$type<BrokerTopic[]>().notNull(),
+    madeAt: instant('made_at').notNull(),
+    madeBy: text('made_by').notNull(),
+    removedAt: instant('removed_at'),
+    removedBy: text('removed_by'),
+    /** As the server that listens told it last. */
+    status: json('status').$type<BrokerStatus>(),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.id] }),
+    foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
+    index('brokers_rig').on(table.labId, table.rigId),
   ],
 );
 

@@ -4,8 +4,10 @@ import type { Express } from 'express';
 import { createApp } from '../http/create-app';
 import { allRoutes } from '../http/routes';
 import type { Services } from '../http/services';
+import { BrokerWatch } from '../http/work/broker-watch';
 import { heedSchedules } from '../http/work/scheduled-starts';
 import { sendSigns } from '../http/work/signs-of-life';
+import { openMqttLine } from '../ingest/mqtt-line';
 import type { Cancel } from '../interfaces/clock';
 import { startTicks, type Chore } from '../scheduler/ticks';
 import { keepHouse } from '../store/housekeeping';
@@ -63,12 +65,16 @@ class Life {
   private cancelRefresh: Cancel = () => undefined;
   private ticks: { stop(): Promise<void> } | null = null;
   private stopped = false;
+  private readonly brokers: BrokerWatch;
 
   constructor(
     private readonly services: Services,
     private readonly inside: Inside,
     private readonly parts: BuildParts,
-  ) {}
+  ) {
+    const { paceMs } = parts.overrides ?? {};
+    this.brokers = new BrokerWatch({ services, holds: (rigId) => inside.leases.holds(rigId), open: openMqttLine, paceMs });
+  }
 
   async start(): Promise<void> {
     const { services, inside } = this;
@@ -85,7 +91,10 @@ class Life {
     // What could be slow comes after the rigs.
     inside.background.add(keepHouse(db, services.clock.utcMs()), 'keeping house');
     if (roles.includes('worker')) inside.crew.start();
-    if (roles.includes('rig')) inside.watch.start();
+    if (roles.includes('rig')) {
+      inside.watch.start();
+      this.brokers.start();
+    }
     if (this.parts.overrides?.ticks ?? services.config.mode !== 'test') this.ticks = startTicks(this.chores(), services.log);
   }
 
@@ -94,6 +103,7 @@ class Life {
     this.stopped = true;
     this.cancelRefresh();
     inside.watch.stop();
+    const brokersStopped = this.brokers.stop();
     services.live.close();
     services.lines.close();
     services.guided.closeAll();
@@ -101,7 +111,7 @@ class Life {
     services.supervisor.close();
     const crewStopped = inside.crew.stop();
     await inside.closeTasks();
-    await Promise.all([crewStopped, this.ticks?.stop()]);
+    await Promise.all([crewStopped, brokersStopped, this.ticks?.stop()]);
     await inside.stations.close();
     await inside.apparatus.end();
     inside.arming.close();

@@ -80,7 +80,8 @@ function readLine(line: string, { channels, nowUtcMs }: NdjsonRules): Sample | s
   return untimely(utcMs, nowUtcMs) ?? { channel, utcMs, value };
 }
 
-function untimely(utcMs: number, nowUtcMs: number): string | null {
+/** What is wrong with the instant of a sample that has just come; null where nothing is. */
+export function untimely(utcMs: number, nowUtcMs: number): string | null {
   const aheadMs = utcMs - nowUtcMs;
   if (aheadMs > MOST_AHEAD_MS)
     return `lies ${Math.round(aheadMs / 1000)} s in the future by the clock of the server; set the clock of the device (NTP)`;

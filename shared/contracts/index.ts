@@ -1,5 +1,6 @@
 import * as alarms from './alarms';
 import * as audit from './audit';
+import * as brokers from './brokers';
 import * as calls from './calls';
 import * as data from './data';
 import * as devices from './devices';
@@ -41,6 +42,7 @@ export const routes: readonly RouteContract[] = [
   doors,
   data,
   devices,
+  brokers,
   exclusions,
   stepNotes,
   evaluations,

@@ -2,6 +2,7 @@ import type { Request } from 'express';
 import * as contracts from '@/shared/contracts/devices';
 import type { DeviceTokenView, StreamChannel } from '@/shared/contracts/devices';
 import { MOST_PROBLEMS, readNdjson, type LineProblem, type ReadSamples } from '@/server/ingest/read-ndjson';
+import type { Transaction } from '@/server/store/database';
 import * as store from '@/server/store/device-tokens';
 import { channelsOfRig, findOrMakeChannel, type ChannelRecord } from '@/server/store/imports';
 import { findRig } from '@/server/store/rigs';
@@ -23,7 +24,7 @@ const viewOf = (token: store.DeviceTokenRecord): DeviceTokenView => ({
   revokedAt: isoOrNull(token.revokedAt),
 });
 
-async function assertRig(services: Services, rig: { labId: string; rigId: string }): Promise<void> {
+export async function assertRig(services: Services, rig: { labId: string; rigId: string }): Promise<void> {
   if ((await findRig(services.database.db, rig.labId, rig.rigId)) === null) throw notFound('rig');
 }
 
@@ -39,6 +40,25 @@ function misfit(channel: ChannelRecord, wanted: StreamChannel): string | null {
 
 const quantityOf = ({ role, unit, name }: StreamChannel) =>
   role === 'environment' ? name : unit.endsWith('rad') ? 'pendulum angle' : 'spot position';
+
+/**
+ * Finds or makes the channels that something outside is to fill.
+ * @throws ProblemError where one is there that it cannot fill
+ */
+export async function makeStreamChannels(
+  tx: Transaction,
+  rig: { labId: string; rigId: string; createdAt: number },
+  { wanted, pathOf }: { wanted: readonly StreamChannel[]; pathOf: (index: number) => string },
+): Promise<void> {
+  for (const [index, channel] of wanted.entries()) {
+    const facts = { ...channel, ...rig, runId: null, quantity: quantityOf(channel), source: 'stream' as const };
+    const why = misfit(await findOrMakeChannel(tx, facts), channel);
+    if (why !== null)
+      throw new ProblemError('already-exists', `The channel ${channel.name} of this rig ${why}. Choose another name for the new one.`, [
+        { path: pathOf(index), message: 'another name' },
+      ]);
+  }
+}
 
 const deviceRoutesOfLab = [
   mount(contracts.listDevices, async ({ params, membership, services }) => {
@@ -64,14 +84,11 @@ const deviceRoutesOfLab = [
       data: (made: store.DeviceTokenRecord) => ({ rigId: rig.rigId, tokenId: made.id, name: made.name, channels: made.channels }),
     };
     const made = await audited(context, entry, async (tx) => {
-      for (const [index, wanted] of body.channels.entries()) {
-        const facts = { ...wanted, ...rig, runId: null, quantity: quantityOf(wanted), source: 'stream' as const, createdAt: madeAt };
-        const why = misfit(await findOrMakeChannel(tx, facts), wanted);
-        if (why !== null)
-          throw new ProblemError('already-exists', `The channel ${wanted.name} of this rig ${why}. Choose another name for the new one.`, [
-            { path: `channels.${String(index)}.name`, message: 'another name' },
-          ]);
-      }
+      await makeStreamChannels(
+        tx,
+        { ...rig, createdAt: madeAt },
+        { wanted: body.channels, pathOf: (index) => `channels.${String(index)}.name` },
+      );
       const channels = [...new Set(body.channels.map(({ name }) => name))];
       return store.insertDeviceToken(tx, {
         ...rig,

@@ -2,6 +2,7 @@ import type { MountedRoute } from '../route-context';
 import { alarmRoutes } from './alarms';
 import { armingRoutes } from './arming';
 import { auditRoutes } from './audit';
+import { brokerRoutes } from './brokers';
 import { callRoutes } from './calls';
 import { dataRoutes } from './data';
 import { deviceRoutes } from './devices';
@@ -38,6 +39,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...dataRoutes,
   ...sampleExportRoutes,
   ...deviceRoutes,
+  ...brokerRoutes,
   ...exclusionRoutes,
   ...stepNoteRoutes,
   ...evaluationRoutes,

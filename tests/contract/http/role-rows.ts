@@ -39,6 +39,10 @@ export const shortProtocol = (name: string): ProtocolDocument => ({
   ],
 });
 
+const topic = (name: string) => ({
+  ...{ filter: 'lab/air', valuePath: null, time: null, timeUS: 1 },
+  channel: { name, role: 'environment', unit: 'degC', rateHz: 1 },
+});
 const mapping = { delimiter: ',', decimal: '.', headerRow: true, timeColumn: 0, timeFormat: 'iso', valueColumn: 1, unit: 'urad' } as const;
 
 const lab = ({ labId }: Things) => ({ labId });
@@ -181,6 +185,14 @@ export const rows: Readonly<Record<string, Row>> = {
     allowed: 201,
   },
   revokeDeviceToken: { params: (things) => ({ ...rig(things), tokenId: nobody }), allowed: 404 },
+  listBrokers: { params: rig, allowed: 200 },
+  addBroker: {
+    params: rig,
+    // The discard port, where nothing listens.
+    body: () => ({ address: 'mqtt://127.0.0.1:9', userName: null, password: null, topics: [topic(randomUUID())] }),
+    allowed: 201,
+  },
+  removeBroker: { params: (things) => ({ ...rig(things), brokerId: nobody }), allowed: 404 },
   appendSamples: { raw: '{"time_utc": "2031-02-14T20:00:00Z", "value": 1}', allowed: 401 },
   listExclusions: { params: run, allowed: 200 },
   makeExclusion: { params: run, body: () => ({ startUtcMs: 2, endUtcMs: 1, reason: 'the door was open' }), allowed: 400 },
