@@ -6,7 +6,7 @@ import { excludedPart } from '@/components/data/stretch';
 import { useExclusions } from '@/components/data/exclusion-list';
 import { Empty, FilterGroup, Label, Loading, Panel, ProblemNotice, Screen, Select, Tabs, useWide } from '@/components/ui';
 import type { ChainedEvent } from '@/shared/archive/run-records';
-import { getRun, listSteps, stepsCsv, type StepRowView } from '@/shared/contracts/runs';
+import { getRun, listSteps, stepsCsv, stepsJson, type StepRowView } from '@/shared/contracts/runs';
 import { zoneName } from '@/shared/lib/format-time';
 import { DownloadLink } from './download-link';
 import { ChainHead } from './event-list';
@@ -22,7 +22,7 @@ const everyMs = 4000;
 /** The step log of a run: what was planned, what happened, and how well the times are known. */
 export function StepLogScreen() {
   const { runId, row } = useLocalSearchParams<{ runId: string; row?: string }>();
-  const { labId, timeZone } = useLab();
+  const { timeZone } = useLab();
   const run = useLabQuery(getRun, { params: { runId }, everyMs: everyMs * 2 });
   const over = run.data !== undefined && isOver(run.data.data.state);
   const steps = useLabQuery(listSteps, { params: { runId }, ...(over ? {} : { everyMs }) });
@@ -32,7 +32,7 @@ export function StepLogScreen() {
     <Screen
       title="Step log"
       back={{ href: `/runs/${runId}` as Href, label: run.data?.data.rigName ?? 'the run' }}
-      trailing={<DownloadLink address={addressOf(stepsCsv, { params: { labId, runId } })} label="CSV" fileName={`steps-${runId}.csv`} />}
+      trailing={<Downloads runId={runId} />}
       testID="step-log"
     >
       {steps.isPending ? <Loading label="Loading the step log" /> : null}
@@ -57,6 +57,18 @@ export function StepLogScreen() {
         />
       )}
     </Screen>
+  );
+}
+
+/** The step log as a file: for a spreadsheet, and for a program. */
+function Downloads({ runId }: { runId: string }) {
+  const { labId } = useLab();
+  const asked = { params: { labId, runId } };
+  return (
+    <View className="flex-row">
+      <DownloadLink address={addressOf(stepsCsv, asked)} label="CSV" fileName={`steps-${runId}.csv`} testID="steps-csv" />
+      <DownloadLink address={addressOf(stepsJson, asked)} label="JSON" fileName={`steps-${runId}.json`} testID="steps-json" />
+    </View>
   );
 }
 

@@ -257,6 +257,16 @@ export const stepsCsv = defineRoute({
   produces: 'text/csv',
   problems: ['not-found'],
 });
+export const stepsJson = defineRoute({
+  name: 'stepsJson',
+  summary: 'The step log as a JSON file',
+  method: 'GET',
+  path: `${path}/steps.json`,
+  access: 'read',
+  status: 200,
+  produces: 'application/json',
+  problems: ['not-found'],
+});
 export const listEvents = defineRoute({
   name: 'listEvents',
   summary: 'The event chain',

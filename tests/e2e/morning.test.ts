@@ -87,8 +87,16 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.sees('10 rows');
   });
 
+  chapter('the JSON holds it for a program, under the names of the CSV', async () => {
+    const [download] = await Promise.all([hand.page.waitForEvent('download'), hand.taps('steps-json')]);
+    expect(download.suggestedFilename()).toMatch(/\.json$/);
+    const file = JSON.parse(readFileSync(await download.path(), 'utf8')) as { steps: { path: string; start_utc: string }[] };
+    const { items } = (await read(lab(), `${runId}/steps`)) as { items: StepRowView[] };
+    expect(file.steps.map(({ path }) => path)).toEqual(items.map(({ path }) => path));
+  });
+
   chapter('the CSV holds the same log', async () => {
-    const [download] = await Promise.all([hand.page.waitForEvent('download'), hand.taps('download')]);
+    const [download] = await Promise.all([hand.page.waitForEvent('download'), hand.taps('steps-csv')]);
     expect(download.suggestedFilename()).toMatch(/\.csv$/);
     const table: Record<string, string>[] = parse(readFileSync(await download.path(), 'utf8'), { columns: true });
     const { items } = (await read(lab(), `${runId}/steps`)) as { items: StepRowView[] };

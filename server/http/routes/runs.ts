@@ -2,6 +2,7 @@ import type { Response } from 'express';
 import { readMorning } from '@/shared/contracts/morning';
 import * as contracts from '@/shared/contracts/runs';
 import { stepsCsv } from '@/shared/archive/step-csv';
+import { stepsJson } from '@/shared/archive/step-json';
 import { findProtocol, findRevision } from '@/server/store/protocols';
 import { findMassSet, findRig } from '@/server/store/rigs';
 import * as store from '@/server/store/runs-read';
@@ -108,6 +109,14 @@ const recordRoutes = [
     const text = stepsCsv(await store.readSteps(services.database.db, { labId: run.labId, runId: run.id }));
     attachOf(res, run, '-steps.csv');
     res.type('text/csv').send(text);
+    return undefined;
+  }),
+
+  mount(contracts.stepsJson, async ({ params, membership, services, res }) => {
+    const run = await load(services, membership.labId, params.runId);
+    const steps = await store.readSteps(services.database.db, { labId: run.labId, runId: run.id });
+    attachOf(res, run, '-steps.json');
+    res.type('application/json').send(stepsJson({ run: run.id, protocol: run.protocolName, rig: run.rigName }, steps));
     return undefined;
   }),
 

@@ -140,6 +140,7 @@ export const rows: Readonly<Record<string, Row>> = {
   liveRun: { params: run, allowed: 200 },
   listSteps: { params: run, allowed: 200 },
   stepsCsv: { params: run, allowed: 200 },
+  stepsJson: { params: run, allowed: 200 },
   listEvents: { params: run, allowed: 200 },
   listRunAlarms: { params: run, allowed: 200 },
   downloadArchive: { params: run, allowed: 200 },

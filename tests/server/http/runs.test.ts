@@ -144,6 +144,19 @@ describe('a run', () => {
     expect(csv.text.split('\n')[0]).toMatch(/^seq,path,kind,label,station,planned_start_utc/);
     expect(csv.text.trim().split('\n')).toHaveLength(6);
 
+    const json = await lab.as('viewer', 'GET', `${runs}/${runId}/steps.json`).expect(200);
+    expect(json.headers['content-disposition']).toMatch(/^attachment; filename="evenfall-2031-02-14-whole-[0-9a-f]{8}-steps\.json"$/);
+    expect(json.body).toMatchObject({ format: 'evenfall-steps', version: 1, run: runId, protocol: view.protocolName, rig: view.rigName });
+    const named = (json.body as { steps: Record<string, unknown>[] }).steps;
+    expect(named.map((step) => Object.keys(step).join(','))).toEqual(Array(5).fill(csv.text.split('\n')[0]));
+    expect(named.map(({ start_utc: at }) => at)).toEqual(
+      csv.text
+        .trim()
+        .split('\n')
+        .slice(1)
+        .map((line) => line.split(',')[7]),
+    );
+
     await lab.services.idle();
     const zip = await lab
       .as('viewer', 'GET', `${runs}/${runId}/archive.zip`)
