@@ -7,6 +7,7 @@ import type { FitCurve } from '@/shared/evaluation/result';
 import { Axes, mapInto, roomy, type FrameBox, type FrameScale } from './chart-frame';
 import { pathOf } from './curve';
 import { HiddenTable } from './hidden-table';
+import { residualRms, residualsOf } from './residuals';
 import { laneOf } from './strip-model';
 import { useWidth } from './use-width';
 
@@ -23,12 +24,6 @@ const residualPx = 68;
 const betweenPx = 30;
 const heightPx = top + mainPx + betweenPx + residualPx + 40;
 
-/** Root mean square of data minus fit, rad. */
-function residualRms(curve: FitCurve): number {
-  const squares = curve.dataRad.map((y, index) => (y - (curve.modelRad[index] as number)) ** 2);
-  return Math.sqrt(squares.reduce((sum, square) => sum + square, 0) / Math.max(1, squares.length));
-}
-
 /** Binned data and the fitted curve of one dwell; below, what is left of the data, in µrad. */
 export function FitPlot({ curve, rangeMrad }: FitPlotProps) {
   const { colors } = useTheme();
@@ -36,7 +31,7 @@ export function FitPlot({ curve, rangeMrad }: FitPlotProps) {
   const minutes = curve.tS.map((t) => t / 60);
   const dataMrad = curve.dataRad.map((y) => y * 1e3);
   const modelMrad = curve.modelRad.map((y) => y * 1e3);
-  const residualUrad = curve.dataRad.map((y, index) => (y - (curve.modelRad[index] as number)) * 1e6);
+  const residualUrad = residualsOf(curve).map((rest) => rest * 1e6);
   const x: [number, number] = [Math.min(0, minutes[0] ?? 0), minutes.at(-1) ?? 1];
   const reach = Math.max(1e-3, ...residualUrad.map(Math.abs)) * 1.15;
   const main = {

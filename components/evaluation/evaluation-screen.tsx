@@ -20,6 +20,7 @@ import { FitPanel } from './fit-panel';
 import { FreezePanel } from './freeze-panel';
 import { GPanel } from './g-panel';
 import { MethodsPanel } from './methods-panel';
+import { SideBySidePanel } from './side-by-side-panel';
 import { SurroundingsPanel } from './surroundings-panel';
 import { TryPanel } from './try-panel';
 import { WarningsPanel } from './warnings-panel';
@@ -121,6 +122,7 @@ function Evaluated({ view, evaluation, result, panel, back, choice, freeze }: Ev
       </Section>
       {wide ? null : fit}
       {wide ? null : dwells}
+      <SideBySidePanel curves={curves} selected={selected} onSelect={setSelected} />
       <BudgetPanel result={result} rig={view.rig} />
       <TryPanel result={result} rig={view.rig} basis={evaluation.basis} />
       <MethodsPanel result={result} />

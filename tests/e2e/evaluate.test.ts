@@ -63,6 +63,15 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.shoots('fit');
   });
 
+  chapter('the dwells stand side by side on the same axes, and one leads to its fit, with the keyboard too', async () => {
+    const small = hand.page.getByTestId('small-dwell');
+    expect(await small.count()).toBeGreaterThan(1);
+    await hand.at('side-by-side').scrollIntoViewIfNeeded();
+    await hand.shoots('side-by-side');
+    await hand.page.getByRole('button', { name: /^Dwell 4 at far/ }).press('Enter');
+    await hand.hears('fit-plot', /^Dwell 4 at far/);
+  });
+
   chapter('the budget names each input with its share, and the chain is whole', async () => {
     await hand.taps('budget-table-toggle');
     const rows = hand.page.getByTestId('budget-row');

@@ -1,0 +1,54 @@
+import { fireEvent, render, screen, within } from '@testing-library/react';
+import { residualRms, sharedAxes } from '@/components/charts';
+import { SideBySidePanel } from '@/components/evaluation/side-by-side-panel';
+import type { FitCurve } from '@/shared/evaluation/result';
+
+const dwell = (seq: number, station: string, restUrad: number[]): FitCurve => ({
+  ...{
+    seq,
+    station,
+    startUtcMs: Date.UTC(2031, 1, 14) + seq * 900_000,
+    tS: restUrad.map((_, at) => 60 * at),
+    modelRad: restUrad.map(() => 1e-3),
+  },
+  dataRad: restUrad.map((rest) => 1e-3 + rest * 1e-6),
+});
+const curves = [
+  dwell(4, 'far', [3, -3, 3, -3]),
+  dwell(6, 'near', [1, -1]),
+  dwell(8, 'far', [0, -12, 0, 0, 0]),
+  dwell(9, 'parked', [0.5, 0.5]),
+];
+const plain = (text: string | null) => (text ?? '').replaceAll(/[\u202f\u00a0]/g, ' ');
+
+test('every dwell stands on the axes of the longest and the worst', () => {
+  const axes = sharedAxes(curves);
+  expect(axes.timeS).toEqual([0, 240]);
+  expect(axes.reachRad).toBeCloseTo(12e-6, 12);
+  // 3, −3, 3, −3 about zero: 3 by definition; one of −12 among five: 12/√5.
+  expect(residualRms(curves[0] as FitCurve)).toBeCloseTo(3e-6, 12);
+  expect(residualRms(curves[2] as FitCurve)).toBeCloseTo(12e-6 / Math.sqrt(5), 12);
+});
+
+test('near stands beside far, each dwell says its residual with its unit, and a tap chooses it', () => {
+  const onSelect = jest.fn();
+  render(<SideBySidePanel curves={curves} selected={6} onSelect={onSelect} />);
+  const seqs = (name: string) =>
+    within(screen.getByRole('list', { name }))
+      .getAllByRole('button')
+      .map((button) => plain(button.getAttribute('aria-label')));
+  expect(seqs('Dwells: near')).toEqual(['Dwell 6 at near, residual 1.0 µrad rms: show its fit']);
+  expect(seqs('Dwells: far')).toEqual([
+    'Dwell 4 at far, residual 3.0 µrad rms: show its fit',
+    'Dwell 8 at far, residual 5.4 µrad rms: show its fit',
+  ]);
+  expect(seqs('Dwells: elsewhere')).toHaveLength(1);
+  expect(screen.getByRole('button', { pressed: true }).getAttribute('aria-label')).toContain('Dwell 6');
+  fireEvent.click(screen.getByRole('button', { name: /^Dwell 8/ }));
+  expect(onSelect).toHaveBeenCalledWith(8);
+});
+
+test('one dwell has nothing to stand beside', () => {
+  render(<SideBySidePanel curves={curves.slice(0, 1)} selected={4} onSelect={jest.fn()} />);
+  expect(screen.queryByTestId('side-by-side')).toBeNull();
+});
