@@ -4,7 +4,7 @@ import { MayNote } from '@/components/people/may-note';
 import { Body, Button, Icon, Label, Num, Panel, ProblemNotice, Row, Section } from '@/components/ui';
 import { formatFixed, withUnit } from '@/shared/lib/format-number';
 import { homeSpeedDegS } from '@/shared/protocol/durations';
-import { compareLimits, type LimitRow } from '@/shared/rig/travel';
+import { compareLimits, freeTurns, travelWithTurns, type LimitRow } from '@/shared/rig/travel';
 import type { StepProps } from './step-props';
 
 const stateWords: Record<LimitRow['state'], string> = {
@@ -19,7 +19,9 @@ const amount = (value: number, unit: string) => withUnit(formatFixed(value, { de
 export function LimitsStep({ rig, etag, motion, line, guided }: StepProps) {
   const may = useMay('rig.edit').ok;
   const { limits } = line;
-  const documented = { ...motion, homeSpeed_deg_s: homeSpeedDegS(motion) };
+  const { leastDeg: minDeg, greatestDeg: maxDeg } = travelWithTurns(motion);
+  const documented = { ...motion, minDeg, maxDeg, homeSpeed_deg_s: homeSpeedDegS(motion) };
+  const turns = freeTurns(motion);
   const rows = limits === null ? [] : compareLimits(limits, documented, motion.stepsPerDegree);
   const same = rows.length > 0 && rows.every(({ state }) => state === 'same');
   return (
@@ -32,6 +34,11 @@ export function LimitsStep({ rig, etag, motion, line, guided }: StepProps) {
             <LimitLine key={row.name} row={row} last={index === rows.length - 1} />
           ))}
         </Panel>
+        {turns === 0 ? null : (
+          <Label>
+            The angles include the turns that the cables stand, {turns} to either side (motion.turnsLimit): a rotation needs them.
+          </Label>
+        )}
         {rows.length === 0 ? null : (
           <Body role="status" testID="limits-state">
             {same ? 'The controller has the limits of the rig document.' : 'The controller has other limits than the rig document.'}

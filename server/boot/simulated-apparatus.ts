@@ -1,6 +1,7 @@
 import { CODATA_2022_G } from '@/shared/physics/constants';
 import { createSimulatedBalance, type SimulatedBalance } from '@/shared/physics/simulated-balance';
 import type { RigDocument, RigMotion } from '@/shared/rig/document';
+import { travelWithTurns } from '@/shared/rig/travel';
 import { feedSimulatedBalance } from '../ingest/simulated-balance';
 import type { ByteLineFactory } from '../interfaces/byte-line';
 import type { Cancel, Clock } from '../interfaces/clock';
@@ -109,4 +110,7 @@ function bornFrom(before: ApparatusState | null, seed: number, nowUtcMs: number)
   return { seed: before.seed, uptimeS: before.uptimeS + (nowUtcMs - before.atUtcMs) / 1000, atUtcMs: nowUtcMs };
 }
 
-const within = (motion: RigMotion, angleDeg: number) => Math.min(motion.maxDeg, Math.max(motion.minDeg, angleDeg));
+function within(motion: RigMotion, angleDeg: number): number {
+  const { leastDeg, greatestDeg } = travelWithTurns(motion);
+  return Math.min(greatestDeg, Math.max(leastDeg, angleDeg));
+}

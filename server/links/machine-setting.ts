@@ -8,6 +8,8 @@ export interface MachineSetting {
   homed: boolean;
   /** Play of the drive between the directions, microsteps. */
   backlashSteps: number;
+  /** Microsteps of a turn of a table that may make whole turns: its flag covers the half turn below the edge. Null: all below it. */
+  turnSteps: number | null;
   /** Whether the warning of SPEC 11.6 is over already at the start. */
   warned: boolean;
   /** Number of starts so far: gives the boot identifier. */

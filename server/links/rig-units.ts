@@ -2,6 +2,7 @@ import { GREATEST_POSITION, GREATEST_RATE, type Limits } from '@/firmware-protoc
 import { homeSpeedDegS } from '@/shared/protocol/durations';
 import type { ControllerLimits } from '../interfaces/turntable-link';
 import type { RigMotion } from '@/shared/rig/document';
+import { travelWithTurns } from '@/shared/rig/travel';
 
 /** Between the rig's degrees and the controller's microsteps (SPEC 2.4). Position 0 is the home edge, at `homeDeg`. */
 
@@ -29,11 +30,10 @@ export function milliStepsOf(rig: RigMotion, degrees: number): number {
   return Math.max(1, Math.min(GREATEST_RATE, Math.floor(degrees * rig.stepsPerDegree * 1000 * (1 + 1e-12))));
 }
 
-/** The soft limits and caps that a controller on this rig has after commissioning. */
+/** The soft limits and caps that a controller on this rig has after commissioning: with the turns that its cables stand, for a rotation needs them. */
 export function limitsOf(rig: RigMotion): Limits {
   return limitsOfDeg(rig, {
-    leastDeg: rig.minDeg,
-    greatestDeg: rig.maxDeg,
+    ...travelWithTurns(rig),
     maxSpeedDegS: rig.maxSpeed_deg_s,
     maxAccelerationDegS2: rig.maxAcceleration_deg_s2,
     homeSpeedDegS: homeSpeedDegS(rig),

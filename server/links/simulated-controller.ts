@@ -1,5 +1,6 @@
 import { PROTOCOL_VERSION, UNTAUGHT_LIMITS, type BootCause } from '@/firmware-protocol/codec';
 import type { RigMotion } from '@/shared/rig/document';
+import { turnStepsOf } from '@/shared/rig/travel';
 import type { ByteLineFactory } from '../interfaces/byte-line';
 import type { Cancel, Clock } from '../interfaces/clock';
 import type { MachineSetting } from './machine-setting';
@@ -73,6 +74,7 @@ function settingOf({ rig, seed = 1, ...options }: SimulatedControllerOptions): M
     startSteps: stepsOfDeg(rig, options.startDeg ?? rig.homeDeg),
     homed: options.homed ?? true,
     backlashSteps: Math.round((options.backlashDeg ?? 0) * rig.stepsPerDegree),
+    turnSteps: turnStepsOf(rig),
     warned: options.warned ?? true,
     bootCount: (seed >>> 0) * 256 + 1,
     uptimeUs: (options.uptimeS ?? DEFAULT_UPTIME_S) * US_PER_MS * US_PER_MS,

@@ -11,6 +11,8 @@ export interface MotionSetting {
   homed: boolean;
   /** Play of the drive between the directions, microsteps. */
   backlashSteps: number;
+  /** As in `MachineSetting`. */
+  turnSteps: number | null;
   emit: (what: Happening, atUs: number) => void;
   /** SPEC 8.2: tested again at the first step; null when the motion may begin. */
   hindrance: () => EndCause | null;
@@ -37,7 +39,7 @@ const TINY_STEPS = 1e-6;
 
 /**
  * The moving part of the simulated controller: trapezoids, braking, homing, the home flag (SPEC 8, 9, 11.4). The flag
- * covers all places of the table below 0. The motor is what is counted, from `zero`; between motor and table there is `play`.
+ * covers all places of the table below 0, or in each turn the half below. The motor is what is counted, from `zero`; between motor and table there is `play`.
  */
 export class SimulatedMotion {
   readonly track: Track;
@@ -55,7 +57,7 @@ export class SimulatedMotion {
     this.play = new Play(setting.backlashSteps);
     this.known = setting.homed;
     this.driversOn = setting.homed;
-    this.covered = setting.startSteps < 0;
+    this.covered = this.inTurn(setting.startSteps) < 0;
   }
 
   get state(): MachineState {
@@ -139,9 +141,9 @@ export class SimulatedMotion {
   /** The belt slips: the table moves by so many steps, and no count tells it but the one at the edge. */
   slip(steps: number, us: number): void {
     this.play.slip(us, this.track.at(us).position, steps);
-    const table = this.tableAt(us);
+    const table = this.inTurn(this.tableAt(us));
     if (this.covered ? table > -TINY_STEPS : table < TINY_STEPS - 1) this.changeFlag(us, this.position(us));
-    if (this.active !== null) this.active.edgeUs = this.nextEdgeUs(this.active.leg);
+    if (this.active !== null) this.active.edgeUs = this.nextEdgeUs(this.active.leg, this.track.at(us).position);
   }
 
   /** Where the table truly is, microsteps from the home edge. */
@@ -199,28 +201,51 @@ export class SimulatedMotion {
     if (first !== undefined) this.play.turn(us, first.from, first.to < first.from ? -1 : 1);
     active.leg = leg;
     active.endUs = leg.at(-1)?.toUs ?? us;
-    active.edgeUs = this.nextEdgeUs(leg);
+    active.edgeUs = this.nextEdgeUs(leg, leg[0]?.from ?? 0);
   }
 
-  private nextEdgeUs(leg: readonly Stretch[]): number | null {
+  /** When the leg passes an edge of the flag next, from a motor position on. */
+  private nextEdgeUs(leg: readonly Stretch[], from: number): number | null {
     const first = leg[0];
     const last = leg.at(-1);
     if (first === undefined || last === undefined) return null;
     const up = last.to > first.from;
-    if (up !== this.covered) return null;
-    const place = this.edgePlace();
+    const place = this.edgePlace(up, from);
+    if (place === null) return null;
     return up ? (last.to >= place ? reachedUs(leg, place) : null) : last.to <= place ? reachedUs(leg, place) : null;
   }
 
-  /** Motor position at which the flag changes its level next. */
-  private edgePlace(): number {
-    return this.covered ? this.play.motorFor(0, 1) : this.play.motorFor(-1, -1);
+  /** Motor position at which the flag changes its level next on a way up or down; null where it never does. */
+  private edgePlace(up: boolean, from: number): number | null {
+    const { turnSteps } = this.setting;
+    const direction = up ? 1 : -1;
+    // Met from below an edge lies on its place, from above one microstep further.
+    const home = this.play.motorFor(up ? 0 : -1, direction);
+    if (turnSteps === null) return up === this.covered ? home : null;
+    const edge = up === this.covered ? home : home + direction * (turnSteps / 2);
+    const ahead = (from - edge) * direction;
+    return edge + direction * turnSteps * Math.ceil(ahead / turnSteps - TINY_STEPS);
+  }
+
+  /** Motor position at the home edge, met in ccw; of a table that makes whole turns in the turn about a motor position. */
+  private homeEdge(near: number): number {
+    const { turnSteps } = this.setting;
+    const edge = this.play.motorFor(0, 1);
+    return turnSteps === null ? edge : edge + turnSteps * Math.round((near - edge) / turnSteps);
+  }
+
+  /** A place of the table within the turn about the home edge; unchanged where it makes none. */
+  private inTurn(table: number): number {
+    const { turnSteps } = this.setting;
+    return turnSteps === null ? table : table - turnSteps * Math.floor(table / turnSteps + 0.5);
   }
 
   private passEdge(active: Active, us: number): void {
-    const place = this.edgePlace();
-    active.edgeUs = null;
+    const { leg } = active;
+    const up = (leg.at(-1)?.to ?? 0) > (leg[0]?.from ?? 0);
+    const place = Math.round(this.track.at(us).position);
     this.changeFlag(us, this.known ? place - this.zero : null);
+    active.edgeUs = this.nextEdgeUs(leg, place + (up ? 1 : -1));
     if (active.state !== 'homing' || active.homing !== 'search') return;
     active.homing = 'past';
     this.setLeg(active, us, brakeStretches(this.track.at(us), active.acceleration, us));
@@ -233,7 +258,7 @@ export class SimulatedMotion {
 
   private endLeg(active: Active): void {
     const us = active.endUs;
-    const edge = this.play.motorFor(0, 1);
+    const edge = this.homeEdge(this.steps(us));
     if (active.state !== 'homing') return this.finish(active, us, active.cause);
     switch (active.homing) {
       case 'search':

@@ -107,6 +107,19 @@ export function keepOutEntered(motion: RigMotion, fromDeg: number, toDeg: number
   return met === undefined || (inArc(fromDeg) && !inArc(toDeg)) ? null : met.reason;
 }
 
+/** How many whole turns to either side a rig may make beyond its travel: none where an arc is kept out, for a turn passes every angle. */
+export const freeTurns = ({ turnsLimit = 0, keepOut = [] }: Pick<RigMotion, 'turnsLimit' | 'keepOut'>): number =>
+  keepOut.length === 0 ? Math.floor(turnsLimit) : 0;
+
+/** How far the turntable may turn at all, deg: the travel of swings, and to either side the turns that its cables stand. */
+export function travelWithTurns(motion: RigMotion): { leastDeg: number; greatestDeg: number } {
+  const turnsDeg = 360 * freeTurns(motion);
+  return { leastDeg: motion.minDeg - turnsDeg, greatestDeg: motion.maxDeg + turnsDeg };
+}
+
+/** Microsteps of a turn of a table that may make whole turns; null for any other. */
+export const turnStepsOf = (motion: RigMotion): number | null => (freeTurns(motion) > 0 ? Math.round(360 * motion.stepsPerDegree) : null);
+
 /** Limits, caps and home speed in the rig's units. */
 export interface MotionLimits {
   minDeg: number;

@@ -1,6 +1,7 @@
 import * as contracts from '@/shared/contracts/link';
 import { homeSpeedDegS } from '@/shared/protocol/durations';
 import type { RigMotion } from '@/shared/rig/document';
+import { travelWithTurns } from '@/shared/rig/travel';
 import { GuidedRefused, type MoveRequest, type GuidedRig } from '@/server/engine/guided-moves';
 import type { ControllerLimits } from '@/server/interfaces/turntable-link';
 import { findRig, listRigs, type RigRecord } from '@/server/store/rigs';
@@ -138,8 +139,7 @@ const orderRoutes = [
 ];
 
 const limitsOfDocument = (motion: RigMotion): ControllerLimits => ({
-  leastDeg: motion.minDeg,
-  greatestDeg: motion.maxDeg,
+  ...travelWithTurns(motion),
   maxSpeedDegS: motion.maxSpeed_deg_s,
   maxAccelerationDegS2: motion.maxAcceleration_deg_s2,
   homeSpeedDegS: homeSpeedDegS(motion),

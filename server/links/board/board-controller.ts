@@ -1,4 +1,5 @@
 import type { RigMotion } from '@/shared/rig/document';
+import { turnStepsOf } from '@/shared/rig/travel';
 import type { Clock } from '../../interfaces/clock';
 import { degOfSteps, stepsOfDeg } from '../rig-units';
 import type { SimulatedController } from '../simulated-controller';
@@ -43,7 +44,9 @@ export function commissionedSession(
   listeners: Pick<BoardListeners, 'onEdge'> = {},
 ): BoardSession {
   const start = homed ? NEAR_EDGE_STEPS : startSteps;
-  const session = new BoardSession({ ...options, program: referenceFirmware(), startSteps: start }, listeners);
+  const turnSteps = turnStepsOf(rig);
+  const turns = turnSteps === null ? {} : { turnSteps };
+  const session = new BoardSession({ ...options, ...turns, program: referenceFirmware(), startSteps: start }, listeners);
   commission(session, rig, { homedAt: homed ? startSteps : null });
   return session;
 }

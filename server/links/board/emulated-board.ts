@@ -19,6 +19,8 @@ export interface BoardOptions {
   startSteps?: number;
   /** Play between motor and table, microsteps; default 0. */
   backlashSteps?: number;
+  /** Microsteps of a turn of a table that may make whole turns: its flag covers the half turn below the edge. Absent: all below it. */
+  turnSteps?: number;
   /** Of what the memory holds after power-on; default 1. */
   seed?: number;
   /** Rate of the bytes that arrive, bit/s; default 115200. */
@@ -76,7 +78,7 @@ export class EmulatedBoard {
     this.core = new AvrCore(options.program);
     this.byteCycles = (BITS_PER_BYTE * CPU_HZ) / (options.hostBaud ?? 115_200);
     this.random = xoroshiro128plus(options.seed ?? 1);
-    this.table = new Turntable(options.startSteps ?? 0, options.backlashSteps ?? 0);
+    this.table = new Turntable(options.startSteps ?? 0, options.backlashSteps ?? 0, options.turnSteps ?? null);
     this.eeprom = new AvrEeprom(this.core, new Uint8Array(EEPROM_BYTES).fill(0xff));
     if (options.eeprom !== undefined) this.eeprom.cells.set(options.eeprom);
     this.uart = new AvrUart(this.core, (byte, cycle) => this.listeners.onByte?.(byte, cycle));

@@ -9,6 +9,8 @@ export class Turntable {
   constructor(
     start: number,
     private readonly backlash: number,
+    /** Microsteps of a turn, where the table may make whole turns; null: the flag covers all places below the edge. */
+    private readonly turn: number | null = null,
   ) {
     this.place = start;
     // As if it had been approached counter-clockwise: the play is on the other side.
@@ -16,9 +18,10 @@ export class Turntable {
     this.track = new StepTrack(start);
   }
 
-  /** SPEC 8.6: the flag covers all places below the edge. */
+  /** SPEC 8.6: the flag covers all places below the edge; on a table that makes whole turns the half turn below it. */
   get covered(): boolean {
-    return this.place < 0;
+    const { place, turn } = this;
+    return turn === null ? place < 0 : place - turn * Math.floor(place / turn) >= turn / 2;
   }
 
   step(direction: 1 | -1, cycle: number): void {

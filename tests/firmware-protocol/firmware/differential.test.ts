@@ -37,6 +37,7 @@ function bySimulation(happenings: readonly Happening[]): Heard {
     {
       limits,
       startSteps: START_STEPS,
+      turnSteps: null,
       backlashSteps: 0,
       homed: false,
       warned: false,

@@ -1,4 +1,5 @@
 import { decodeLine, encode, NO_SESSION, type EventMessage, type OkBody, type Order, type Reply } from '@/firmware-protocol/codec';
+import type { MachineSetting } from '@/server/links/machine-setting';
 import { SimulatedMachine } from '@/server/links/simulated-machine';
 
 export const limits = { least: -1700, greatest: 1700, speed: 300_000, acceleration: 600_000, home: 100_000 };
@@ -13,12 +14,13 @@ export class MachinePeer {
   nowMs = 0;
   private tags = 0;
 
-  constructor(options: { homed?: boolean; warned?: boolean; startSteps?: number; backlashSteps?: number } = {}) {
+  constructor(options: Partial<Pick<MachineSetting, 'limits' | 'homed' | 'warned' | 'startSteps' | 'backlashSteps' | 'turnSteps'>> = {}) {
     const setting = {
-      limits,
+      limits: options.limits ?? limits,
       startSteps: options.startSteps ?? 0,
       homed: options.homed ?? true,
       backlashSteps: options.backlashSteps ?? 0,
+      turnSteps: options.turnSteps ?? null,
       warned: options.warned ?? true,
       bootCount: 0x1a2b,
       uptimeUs: 60e6,

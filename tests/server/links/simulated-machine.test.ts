@@ -227,3 +227,26 @@ describe('stops (SPEC 9)', () => {
     expect(peer.status().flags & FLAG.driversOn).toBe(0);
   });
 });
+
+describe('a table that makes whole turns: its flag covers the half of each turn below the edge', () => {
+  const turning = (startSteps: number) =>
+    new MachinePeer({ limits: { ...limits, least: -7000, greatest: 7000 }, startSteps, turnSteps: 1600 }).greet();
+  const edges = (peer: MachinePeer) => peer.happened().filter((what) => what.startsWith('edge'));
+
+  test('the edge is passed in every turn, its other end half a turn on', () => {
+    const peer = turning(0);
+    peer.ask(peer.move(3300));
+    peer.passRenewing(15_000);
+    expect(edges(peer)).toEqual(['edge 800 cw', 'edge 1600 ccw', 'edge 2400 cw', 'edge 3200 ccw']);
+    peer.ask(peer.move(-10));
+    peer.passRenewing(15_000);
+    expect(edges(peer).slice(4)).toEqual(['edge 3199 cw', 'edge 2399 ccw', 'edge 1599 cw', 'edge 799 ccw', 'edge -1 cw']);
+  });
+
+  test('homing meets the edge of the turn in which the table stands', () => {
+    const peer = turning(1650);
+    peer.ask({ word: 'home', tag: peer.tag() });
+    peer.passRenewing(30_000);
+    expect(peer.happened().find((what) => what.startsWith('homed'))).toBe('homed 1600');
+  });
+});

@@ -2,7 +2,16 @@ import * as fc from 'fast-check';
 import { pathObstacles } from '@/shared/protocol/motion-path';
 import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
 import { rigDocumentSchema, type RigMotion } from '@/shared/rig/document';
-import { arcOutside, compareLimits, keepOutEntered, limitsOfTravel, travelFindings, withTravel } from '@/shared/rig/travel';
+import {
+  arcOutside,
+  compareLimits,
+  keepOutEntered,
+  limitsOfTravel,
+  travelFindings,
+  travelWithTurns,
+  turnStepsOf,
+  withTravel,
+} from '@/shared/rig/travel';
 
 describe('travel taught by hand', () => {
   test('of the close rig: ends at 28° and 152° with 2° of margin give its limits, and the rest is its keep-out arc', () => {
@@ -95,4 +104,12 @@ test('limits of the controller are held against the document row by row', () => 
     'wider',
     'wider',
   ]);
+});
+
+test('a table turns beyond its travel by the whole turns that its cables stand, and by none where an arc is kept out', () => {
+  const motion = demoRigWide.motion as RigMotion;
+  expect(travelWithTurns(motion)).toEqual({ leastDeg: -175, greatestDeg: 175 });
+  expect(travelWithTurns({ ...motion, turnsLimit: 2.9 })).toEqual({ leastDeg: -895, greatestDeg: 895 });
+  expect(travelWithTurns({ ...motion, turnsLimit: 2, keepOut: [[40, 60]] })).toEqual({ leastDeg: -175, greatestDeg: 175 });
+  expect([turnStepsOf(motion), turnStepsOf({ ...motion, turnsLimit: 1 })]).toEqual([null, 16_000]);
 });
