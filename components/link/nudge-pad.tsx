@@ -4,9 +4,9 @@ import { readDecimal } from '@/components/ui/read-decimal';
 import { Body, Button, Check, Field, Label, Panel, ProblemNotice } from '@/components/ui';
 import type { GuidedView, LineMessage } from '@/shared/contracts/link';
 import { formatDegrees } from '@/shared/lib/format-angle';
-import { homingObstacle } from '@/shared/protocol/homing';
+import { homingObstacle, isWound } from '@/shared/protocol/homing';
 import type { RigMotion } from '@/shared/rig/document';
-import { keepOutEntered } from '@/shared/rig/travel';
+import { freeTurns, keepOutEntered } from '@/shared/rig/travel';
 import type { FirstMove } from './first-move-draft';
 import type { StepProps } from './step-props';
 import type { GuidedMove } from './use-guided';
@@ -112,7 +112,11 @@ export function NudgePad({ motion, line, guided, move }: NudgePadProps) {
 /** Finds the home edge, so that angles are known. Where the way to it may not be free, only somebody who looks at it begins. */
 export function HomeButton({ rig, line, guided }: Pick<StepProps, 'rig' | 'line' | 'guided'>) {
   const known = line.controller?.positionKnown === true;
-  const obstacle = homingObstacle(rig.document, line.controller?.angleDeg ?? null);
+  const { motion } = rig.document;
+  const angleDeg = line.controller?.angleDeg ?? null;
+  const obstacle = homingObstacle(rig.document, angleDeg);
+  const mayLook = motion !== undefined && (angleDeg === null || !isWound(motion, angleDeg));
+  const what = motion !== undefined && freeTurns(motion) > 0 ? 'the gap, and the cables are not wound up' : 'the gap';
   const [looksAt, setLooksAt] = useState<string | null>(null);
   const looks = obstacle !== null && looksAt === obstacle;
   return (
@@ -125,12 +129,14 @@ export function HomeButton({ rig, line, guided }: Pick<StepProps, 'rig' | 'line'
       {obstacle === null ? null : (
         <Panel edge="danger" className="gap-3" testID="homing-obstacle">
           <Body>The rig does not home by itself: {obstacle}.</Body>
-          <Check
-            label="I look at the gap, with Stop under my thumb: home all the same."
-            value={looks}
-            onChange={(on) => setLooksAt(on ? obstacle : null)}
-            testID="home-all-the-same"
-          />
+          {mayLook ? (
+            <Check
+              label={`I look at ${what}, with Stop under my thumb: home all the same.`}
+              value={looks}
+              onChange={(on) => setLooksAt(on ? obstacle : null)}
+              testID="home-all-the-same"
+            />
+          ) : null}
         </Panel>
       )}
       <Button

@@ -3,13 +3,12 @@ import { Pressable, View } from 'react-native';
 import { Body, Icon, Label, Sheet, Tabs } from '@/components/ui';
 import type { Step, StepKind } from '@/shared/protocol/document';
 import { newStep } from '@/shared/protocol/new-step';
-import { isBuilt } from '@/shared/protocol/support';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import type { RigDocument } from '@/shared/rig/document';
 import { useEditor } from './editor-context';
 import { kindNames, kindUses, stepIcons, stepTitle } from './step-words';
 
-const kinds: readonly StepKind[] = ['swing', 'dwell', 'kick', 'repeat', 'settle', 'wait', 'proof', 'prompt', 'home', 'mark'];
+const kinds: readonly StepKind[] = ['swing', 'dwell', 'kick', 'rotate', 'repeat', 'settle', 'wait', 'proof', 'prompt', 'home', 'mark'];
 
 /** A repeat with nothing in it cannot be saved, so a new one begins with a pair; a first swing goes to the other side than the last. */
 function freshStep(kind: StepKind, rig: RigDocument, lastTarget: string): Step {
@@ -54,7 +53,7 @@ export function AddStepSheet({ rig, onClose }: { rig: RigDocument | null; onClos
       ) : null}
       <Label>{where}</Label>
       <View>
-        {kinds.filter(isBuilt).map((kind) => (
+        {kinds.map((kind) => (
           <Pressable
             key={kind}
             role="button"

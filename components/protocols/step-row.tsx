@@ -3,7 +3,6 @@ import { Body, Icon, Label, Num } from '@/components/ui';
 import type { ThemeColors } from '@/components/theme';
 import { laneOf } from '@/components/charts/strip-model';
 import type { Step } from '@/shared/protocol/document';
-import { isBuilt } from '@/shared/protocol/support';
 import type { StepPath } from '@/shared/protocol/step-path';
 import { useEditor } from './editor-context';
 import { samePath } from './editor-reducer';
@@ -48,7 +47,7 @@ export function StepRow({ step, path, documentPath, tabStop }: StepRowProps) {
       className={`min-h-[60px] flex-row items-center gap-3 rounded-panel border-2 px-2 py-2 ${chosen ? 'border-lamp bg-panel' : 'border-transparent hover:bg-panel'}`}
     >
       <View className="h-10 w-10 flex-none items-center justify-center rounded-xl bg-panel2">
-        <Icon name={stepIcons[step.kind]} tone={isBuilt(step.kind) ? toneOf(step, span?.station ?? '') : 'danger'} />
+        <Icon name={stepIcons[step.kind]} tone={toneOf(step, span?.station ?? '')} />
       </View>
       <View className="min-w-0 flex-1">
         <Body strong={step.kind === 'repeat'} size={15}>

@@ -29,6 +29,7 @@ export const kindUses: Partial<Record<StepKind, string>> = {
   kick: 'Set the pendulum swinging and record how it rings down: period and decay.',
   settle: 'Wait for creep and heat to die down, for a time or until calm. Not evaluated.',
   wait: 'Go on at a time of day in the lab, or when a channel is quiet.',
+  rotate: 'Turn the sources continuously, then back. For the modulation method; on a rig free to turn.',
   proof: 'Say after the first pair whether the night is worth running.',
   prompt: 'Let people in: go on when somebody has confirmed.',
   mark: 'Put a line of yours into the log.',
@@ -73,6 +74,8 @@ export function stepTitle(step: Step): string {
       return `Mark “${step.label}”`;
     case 'kick':
       return `Kick, ${formatSignificant(step.amplitude_urad / 1000, 2)} mrad`;
+    case 'rotate':
+      return `Rotate ${Math.abs(step.turns) === 1 ? 'a turn' : `${Math.abs(step.turns)} turns`}`;
     case 'settle':
       return step.calmWhen === undefined ? 'Settle' : 'Settle until calm';
     case 'prompt':
@@ -109,6 +112,8 @@ function lengthWords(step: Step): string {
         : waitWords(step);
     case 'repeat':
       return [step.steps.length === 0 ? 'nothing in it yet' : '', boundsWords(step)].filter((part) => part !== '').join(' · ');
+    case 'rotate':
+      return `${step.turns > 0 ? '↺' : '↻'} a turn in ${formatDuration(step.period_s)}, then back`;
     case 'settle':
       return waitWords(step);
     case 'prompt':

@@ -1,6 +1,7 @@
 import { memo } from 'react';
 import { View } from 'react-native';
 import { PlanView } from '@/components/charts';
+import { isMotion } from '@/components/charts/strip-model';
 import { Label, Num, Panel } from '@/components/ui';
 import type { LiveMessages, RunView, StepRowView } from '@/shared/contracts/runs';
 import { formatDegrees } from '@/shared/lib/format-angle';
@@ -23,7 +24,7 @@ const sources: Record<StepRowView['angleSource'], string> = {
 
 /** The turntable from above with its angle in figures and the last motion's end with its uncertainty. */
 export const PlanPanel = memo(function PlanPanel({ view, rows, beat, lost, large = false }: PlanPanelProps) {
-  const moved = rows.findLast((row) => (row.kind === 'swing' || row.kind === 'home') && row.endUtcMs !== null);
+  const moved = rows.findLast((row) => isMotion(row) && row.endUtcMs !== null);
   const angleDeg = beat?.angleDeg ?? moved?.angleEndDeg ?? null;
   return (
     <Panel className={large ? 'items-center gap-4' : 'flex-row items-center gap-5'}>

@@ -76,6 +76,8 @@ export function stepTitle(row: TitledRow, protocol: TargetSource | null): string
       const target = swingTarget(row, protocol);
       return `Swing${target === '' ? '' : ` to ${target}`}${moveName(row, protocol)}${row.outcome === 'cut short' ? ', cut short' : ''}`;
     }
+    case 'rotate':
+      return `Rotate${row.path.endsWith('.b') ? ', turning back' : ''}${row.outcome === 'cut short' ? ', cut short' : ''}`;
     case 'mark':
       return row.label === '' ? 'Mark' : `Mark: ${row.label}`;
     case 'ring-down':
@@ -117,6 +119,7 @@ const kinds: Record<string, string> = {
   archived: 'Archived',
   'edge-not-told': 'Not measured: the controller never told of this edge of a motion',
   'home-edge': 'Passed the home edge',
+  'flag-end': 'Passed the other end of the home flag',
   'server-restarted': 'Taken up by a server',
   'order-drawn': 'Order of the pass drawn',
 };

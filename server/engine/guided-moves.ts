@@ -1,4 +1,4 @@
-import { homingObstacle } from '@/shared/protocol/homing';
+import { homingObstacle, isWound } from '@/shared/protocol/homing';
 import type { RigDocument, RigMotion } from '@/shared/rig/document';
 import { keepOutEntered } from '@/shared/rig/travel';
 import type { Cancel, Clock } from '../interfaces/clock';
@@ -374,11 +374,18 @@ function assertNudge(motion: RigMotion, link: TurntableLink, { steps, intoKeepOu
 }
 
 /** Homing turns by itself, with masses on the table perhaps: where it might not turn towards the middle somebody has to look. */
-function assertHoming({ document }: GuidedRig, link: TurntableLink, { intoKeepOut }: Extract<GuidedRequest, { kind: 'home' }>): void {
-  const obstacle = intoKeepOut ? null : homingObstacle(document, link.controller()?.angleDeg ?? null);
+function assertHoming(
+  { document, motion }: GuidedRig,
+  link: TurntableLink,
+  { intoKeepOut }: Extract<GuidedRequest, { kind: 'home' }>,
+): void {
+  const angleDeg = link.controller()?.angleDeg ?? null;
+  // No look at the gap makes the turns undone that the flag does not count.
+  const mayLook = angleDeg === null || !isWound(motion, angleDeg);
+  const obstacle = intoKeepOut && mayLook ? null : homingObstacle(document, angleDeg);
   if (obstacle !== null)
     throw new GuidedRefused(
       'not-possible-now',
-      `The rig does not home by itself: ${obstacle}. Say that you look at the gap, or correct the rig document.`,
+      `The rig does not home by itself: ${obstacle}.${mayLook ? ' Say that you look at the gap, or correct the rig document.' : ''}`,
     );
 }

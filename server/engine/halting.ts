@@ -7,6 +7,7 @@ import { slipRefusal } from './position';
 import { predictEndUtcMs } from './predicted-end';
 import { awaits, beginAwaiting } from './awaiting';
 import { toleranceDeg } from './rows';
+import { lostWords, noteWound } from './windings';
 import { beginHome, beginStanding, beginSwing, chooseAfter, chooseNext, firstLeadMs, standingEndUtcMs } from './steps';
 import { CONFIRM_MS, GAP_LIMIT_MS, LEAST_LEAD_MS } from './timing';
 
@@ -169,7 +170,7 @@ export function motionRefusal(draft: Draft, arm: ArmGiven, armVoid: string | nul
   if (!known.interlockClosed) return 'The interlock is open; close it first.';
   if (!known.supplyPresent) return 'The motor supply is off; switch it on at the rig.';
   if (!known.positionKnown && context.step?.row.kind !== 'home')
-    return 'The controller does not know its position, so this run cannot go on. Stop it, and home the rig in a new run.';
+    return `The controller does not know its position, so this run cannot go on. Stop it, and ${lostWords(draft) ?? 'home the rig in a new run.'}`;
   return slipRefusal(draft) ?? elsewhereRefusal(draft, known) ?? armRefusal(draft, arm, armVoid);
 }
 
@@ -321,6 +322,7 @@ export function becomeHeld(draft: Draft): void {
   closeForRest(draft);
   context.ahead = null;
   Object.assign(context, { holdAfterStep: null, haltedAtUtcMs: null, deadlineUtcMs: null, interruption: null });
+  noteWound(draft, 'held');
   const { code = 'held', text = '' } = context.reason ?? {};
   draft.log('held', { code, reason: text, confirmed: draft.event.type !== 'deadline' });
   draft.notify('held', text);
@@ -330,6 +332,7 @@ export function becomeStopped(draft: Draft): void {
   const { context } = draft;
   confirm(draft);
   closeForRest(draft);
+  noteWound(draft, 'over');
   end(draft, draft.event.at.utcMs);
   const { code = 'stopped', text = '' } = context.reason ?? {};
   draft.log('stopped', { code, reason: text, confirmed: draft.event.type !== 'deadline' });
@@ -361,6 +364,7 @@ export function becomeFinished(draft: Draft): void {
 /** Nothing is left moving: a stop goes out with the failure. */
 export function becomeFailed(draft: Draft): void {
   const { context } = draft;
+  noteWound(draft, 'over');
   const { code = 'failed', text = 'The run failed.' } = context.reason ?? {};
   const { step } = context;
   if (step !== null) draft.closeRow({ at: draft.stamp, angleDeg: context.controller?.angleDeg ?? null, outcome: 'failed' });

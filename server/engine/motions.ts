@@ -11,7 +11,7 @@ import { forgetPosition, noteHomed } from './position';
 import { cursorMoment } from './dwells';
 import { toleranceDeg } from './rows';
 import { endStanding, openSwing, sendMove, standingEndUtcMs, writeMark } from './steps';
-import { LATE_MS, MOTION_GRACE_MS } from './timing';
+import { LATE_MS, motionGraceMs } from './timing';
 
 /** How a motion is followed: begun, refused, ended, finished. */
 
@@ -59,9 +59,13 @@ export function noteBegan(draft: Draft): void {
   confirmResume(draft);
 }
 
-/** A beat counts from the first move of a swing; where a later one came late, as if the first had been late as well. */
+/** A beat counts from the first move of a swing; where a later one came late, as if the first had been late as well. None counts from a rotation. */
 function noteSwingStart({ context, step, motion }: Draft, beganUtcMs: number): void {
   if (step.row.kind === 'home') return;
+  if (step.row.kind === 'rotate') {
+    context.swingStartUtcMs = null;
+    return;
+  }
   const { part } = step.item;
   const offsetMs = part?.kind === 'move' ? 1000 * part.offsetS : 0;
   if (offsetMs === 0 || motion.late || context.swingStartUtcMs === null) context.swingStartUtcMs = beganUtcMs - offsetMs;
@@ -104,7 +108,8 @@ function inOrder(stamp: Instant, { plannedStartUtcMs }: StepRow): Instant {
 
 /** From its beginning on, a motion may take as long as its profile and some grace. */
 export function expectEnd(draft: Draft): void {
-  draft.context.deadlineUtcMs = draft.stamp.utcMs + draft.motion.durationMs + MOTION_GRACE_MS;
+  const { durationMs } = draft.motion;
+  draft.context.deadlineUtcMs = draft.stamp.utcMs + durationMs + motionGraceMs(durationMs);
 }
 
 /** The controller refused or cancelled the move that was sent ahead: it is made at once when the step ends. */

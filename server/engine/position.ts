@@ -46,13 +46,17 @@ export function noteEdge(draft: Draft): void {
   const { rig } = draft.start;
   const { position, step } = draft.context;
   if (angleDeg === null) return draft.log('home-edge', { angleDeg, direction });
-  const offDeg = angleDeg - (rig.motion?.homeDeg ?? 0);
+  const homeDeg = rig.motion?.homeDeg ?? 0;
   if (isHoming(draft)) {
+    const offDeg = angleDeg - homeDeg;
     if (direction === 'ccw') position.homingOffDeg = offDeg;
     return draft.log('home-edge', { angleDeg, direction, offDeg });
   }
+  const placeDeg = placeInTurn(draft, angleDeg - homeDeg);
+  if (placeDeg === null) return draft.log('flag-end', { angleDeg, direction });
+  const offDeg = placeDeg;
   const before = position.proof;
-  position.proof = afterPass(rig, before, { utcMs: at.utcMs, uS: at.uS, direction, angleDeg });
+  position.proof = afterPass(rig, before, { utcMs: at.utcMs, uS: at.uS, direction, angleDeg: homeDeg + placeDeg });
   const { slip, proved } = position.proof;
   const slipSteps = slip?.steps ?? proved?.slipSteps ?? 0;
   draft.log('home-edge', { angleDeg, direction, offDeg, slipSteps, slipDeg: slipSteps * stepDeg(rig), proved: slip === null });
@@ -60,6 +64,19 @@ export function noteEdge(draft: Draft): void {
     position.dwells = [];
     if (step?.motion != null) saveFacts(draft, step.row);
   } else if (before.slip === null) noteSlip(draft, { ...slip, found: 'pass' });
+}
+
+/** Further from the edge than this is the other end of the flag, which covers about half a turn, deg. */
+const otherEndDeg = 90;
+
+/**
+ * A count at which the flag changed, as its distance from the edge, deg: a rotation passes the edge in every turn. Null for the other end of the flag, which
+ * a rotation passes as well, and which proves nothing.
+ */
+function placeInTurn({ context }: Draft, offDeg: number): number | null {
+  if (context.step?.row.kind !== 'rotate') return offDeg;
+  const placeDeg = offDeg - 360 * Math.round(offDeg / 360);
+  return Math.abs(placeDeg) > otherEndDeg ? null : placeDeg;
 }
 
 /** Homing has set the count right; where it was off by more than the tolerance, what was counted before is in doubt. */

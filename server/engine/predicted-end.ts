@@ -1,8 +1,9 @@
 import type { RunStart } from '@/shared/archive/run-records';
 import { advanceCursor, type PlannedItem } from '@/shared/protocol/cursor';
 import { stateAfterIfPossible } from '@/shared/protocol/step-effect';
+import { moveOf } from '@/shared/protocol/step-parts';
 import { waitOf } from '@/shared/protocol/wait';
-import type { RunContext } from './run-context';
+import type { ActiveStep, RunContext } from './run-context';
 
 export interface PredictionInput {
   nowUtcMs: number;
@@ -33,7 +34,14 @@ function advanceIfPossible(...args: Parameters<typeof advanceCursor>): ReturnTyp
   }
 }
 
-function afterPresentStep(start: RunStart, { step, moment, swingStartUtcMs, waiting }: RunContext, nowUtcMs: number) {
+/** What a step that a hold left unfinished still takes, ms: of a move only the rest. */
+function lengthLeftMs({ rig }: RunStart, { item, motion, plannedMs, row }: ActiveStep, angleDeg: number | null): number {
+  if (motion?.targetDeg != null && angleDeg !== null) return 1000 * moveOf(item, rig, angleDeg).durationS;
+  return plannedMs ?? (row.plannedEndUtcMs ?? row.startUtcMs) - row.plannedStartUtcMs;
+}
+
+function afterPresentStep(start: RunStart, context: RunContext, nowUtcMs: number) {
+  const { step, moment, swingStartUtcMs, waiting } = context;
   // What ends by a condition may be met as soon as its samples are there.
   if (step?.awaits === true) {
     const windowMs = 1000 * (waitOf(step.item.step)?.windowS ?? 0);
@@ -48,10 +56,12 @@ function afterPresentStep(start: RunStart, { step, moment, swingStartUtcMs, wait
     return { utcMs: Math.max(nowUtcMs, row.plannedEndUtcMs ?? nowUtcMs), angleDeg: moment.angleDeg, swingStartUtcMs };
   const lengthMs = plannedMs ?? (row.plannedEndUtcMs ?? row.startUtcMs) - row.plannedStartUtcMs;
   const offsetMs = step.item.part?.kind === 'move' ? 1000 * step.item.part.offsetS : 0;
-  const endUtcMs = broken ? nowUtcMs + lengthMs : Math.max(row.startUtcMs + lengthMs, nowUtcMs);
+  const endUtcMs = broken
+    ? nowUtcMs + lengthLeftMs(start, step, context.controller?.angleDeg ?? null)
+    : Math.max(row.startUtcMs + lengthMs, nowUtcMs);
   return {
     utcMs: endUtcMs,
     angleDeg: motion?.targetDeg ?? moment.angleDeg,
-    swingStartUtcMs: motion === null ? null : broken ? nowUtcMs - offsetMs : (swingStartUtcMs ?? row.startUtcMs),
+    swingStartUtcMs: motion === null || row.kind === 'rotate' ? null : broken ? nowUtcMs - offsetMs : (swingStartUtcMs ?? row.startUtcMs),
   };
 }

@@ -16,6 +16,8 @@ export interface RemainingPlan {
   next: { path: string; kind: string; label: string; station: string } | null;
   /** The first motion, with where it comes from: a step of the protocol; null: nothing moves any more. */
   firstMotion: LeafStep | null;
+  /** It is the way back of a rotation, whose way out is over. */
+  turnsBack: boolean;
   /** Relative standard uncertainty of G by the plan (not measured): after the dwells done, and after those still to come. */
   relativeU: { soFar: number | null; atEnd: number | null };
 }
@@ -30,6 +32,7 @@ export function resumePlan(start: RunStart, { state, context }: RunSnapshot, now
     dwells: anew?.row.kind === 'dwell' ? 1 : 0,
     next: anew === null ? null : nextOf(anew.item, anew.row.station),
     firstMotion: anew?.motion == null ? null : anew.item.step,
+    turnsBack: anew !== null && isWayBack(anew.item),
   });
 }
 
@@ -55,7 +58,7 @@ export function skipPlan(start: RunStart, { state, context }: RunSnapshot, nowUt
   const leftMs = step.broken ? (step.plannedMs ?? 0) : (plannedEndUtcMs ?? nowUtcMs) - nowUtcMs;
   const after = { ...context, step: null, moment: { ...context.moment, utcMs: nowUtcMs } };
   return {
-    ...planFrom(start, after, { nowUtcMs, dwells: 0, next: null, firstMotion: null }),
+    ...planFrom(start, after, { nowUtcMs, dwells: 0, next: null, firstMotion: null, turnsBack: false }),
     ...{ seq, path, kind, label, station },
     leftS: Math.max(0, leftMs / 1000),
     notGoodPath: mateOf(context, step.row)?.path ?? null,
@@ -68,19 +71,23 @@ interface Begun {
   dwells: number;
   next: RemainingPlan['next'];
   firstMotion: LeafStep | null;
+  turnsBack: boolean;
 }
+
+const motions = new Set<LeafStep['kind']>(['home', 'swing', 'kick', 'rotate']);
+const isWayBack = ({ step, part }: PlannedItem): boolean => step.kind === 'rotate' && part?.kind === 'move' && part.name === 'b';
 
 const nextOf = ({ path, step }: PlannedItem, station: string) => ({ path, kind: step.kind, label: step.label ?? '', station });
 
 function planFrom(start: RunStart, context: RunContext, begun: Begun): RemainingPlan {
-  let { dwells, next, firstMotion } = begun;
+  let { dwells, next, firstMotion, turnsBack } = begun;
   const finishUtcMs = predictEndUtcMs(start, context, {
     nowUtcMs: begun.nowUtcMs,
     eachStep: (item) => {
       const { step } = item;
       next ??= nextOf(item, '');
       if (step.kind === 'dwell') dwells += 1;
-      if (step.kind === 'swing' || step.kind === 'kick' || step.kind === 'home') firstMotion ??= step;
+      if (motions.has(step.kind) && firstMotion === null) [firstMotion, turnsBack] = [step, isWayBack(item)];
     },
   });
   return {
@@ -88,6 +95,7 @@ function planFrom(start: RunStart, context: RunContext, begun: Begun): Remaining
     finishUtcMs,
     next,
     firstMotion,
+    turnsBack,
     relativeU: expectedU(start, context.dwellsDone, context.dwellsDone + dwells),
   };
 }

@@ -113,7 +113,12 @@ export class RigSupervisor {
    */
   assertMayStart(start: RunStart): TurntableLink {
     this.assertFree(start.rigId);
-    const findings = checkAtStart(start, this.parts.linkOf(start.rigId)?.controller() ?? null, this.parts.clock.utcMs());
+    const seen = this.parts.linkOf(start.rigId);
+    const findings = checkAtStart(
+      start,
+      { controller: seen?.controller() ?? null, limits: seen?.limits() ?? null },
+      this.parts.clock.utcMs(),
+    );
     if (findings.length > 0) {
       throw new StartRefused(refusalCodeOf(findings), findings.map(({ message }) => message).join(' '), findings);
     }

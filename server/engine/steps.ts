@@ -12,11 +12,13 @@ import {
 } from '@/shared/protocol/durations';
 import { homingObstacle } from '@/shared/protocol/homing';
 import { pathObstacles } from '@/shared/protocol/motion-path';
+import { rotationRefusals } from '@/shared/protocol/rotation';
 import { stationAt } from '@/shared/protocol/stations';
 import type { PassOrder } from '@/shared/protocol/shuffle';
-import { moveOf, partsOf } from '@/shared/protocol/step-parts';
+import { moveOf, partsOf, rotationHomeDeg } from '@/shared/protocol/step-parts';
 import { waitOf } from '@/shared/protocol/wait';
 import type { RigMotion } from '@/shared/rig/document';
+import { freeTurns } from '@/shared/rig/travel';
 import type { Instant } from '../interfaces/clock';
 import { beginAwaiting } from './awaiting';
 import { cursorMoment, holdOfDwells, lookAtDwell } from './dwells';
@@ -25,7 +27,7 @@ import { noteOrders } from './orders';
 import { runProof } from './proofs';
 import { newRow, stationOf, toleranceDeg } from './rows';
 import type { ActiveStep, Motion, RunContext } from './run-context';
-import { BEGIN_GRACE_MS, LEAD_MS, LEAST_LEAD_MS, LOOK_LEAD_MS, MOTION_GRACE_MS } from './timing';
+import { BEGIN_GRACE_MS, LEAD_MS, LEAST_LEAD_MS, LOOK_LEAD_MS, motionGraceMs } from './timing';
 
 /** How steps begin and end: the actions of the chart that follow the protocol. */
 
@@ -172,20 +174,23 @@ export function beginHome(draft: Draft, item: PlannedItem): void {
     commandId,
     targetDeg: null,
     startUtcMs: null,
-    durationMs: homeLimitMs(motionLimits),
+    durationMs: homeLimitMs(motionLimits, durationMs),
     late: false,
     began: false,
     reached: false,
   };
   draft.openStep({ item, row, plannedMs: null, motion, broken: false });
   context.swingStartUtcMs = null;
-  context.deadlineUtcMs = draft.nowUtcMs + motion.durationMs + MOTION_GRACE_MS;
+  context.deadlineUtcMs = draft.nowUtcMs + motion.durationMs + motionGraceMs(motion.durationMs);
   context.next = 'homing';
 }
 
-/** Homing gives up after the whole travel at home speed, once to find the flag and once to come back to its edge. */
-function homeLimitMs(motion: RigMotion): number {
-  return (2000 * (motion.maxDeg - motion.minDeg)) / homeSpeedDegS(motion);
+/**
+ * Homing gives up after the whole travel at home speed, once to find the flag and once to come back to its edge. A table that may make whole
+ * turns would wind up its cables meanwhile, where the flag is broken: its position is known, and homing takes no longer than planned.
+ */
+function homeLimitMs(motion: RigMotion, plannedMs: number): number {
+  return freeTurns(motion) > 0 ? plannedMs : (2000 * (motion.maxDeg - motion.minDeg)) / homeSpeedDegS(motion);
 }
 
 export interface SwingStart {
@@ -206,24 +211,31 @@ export function beginSwing(draft: Draft, { item, late }: SwingStart): void {
     return;
   }
   const move = moveOf(item, draft.start.rig, context.moment.angleDeg);
-  const obstacle = obstacleOn(draft, move.targetDeg);
-  if (obstacle !== null) {
-    draft.because('path-blocked', `Step ${item.path}: the move is refused because ${obstacle}.`);
+  const refused = moveRefusal(draft, item, move);
+  if (refused !== null) {
+    draft.because('path-blocked', `Step ${item.path}: ${refused}`);
     context.next = 'failed';
     return;
   }
   const commandId = sendMove(draft, move, null);
   openSwing(draft, { item, commandId, startUtcMs: null, late });
-  context.deadlineUtcMs = draft.nowUtcMs + 1000 * move.durationS + MOTION_GRACE_MS;
+  context.deadlineUtcMs = draft.nowUtcMs + 1000 * move.durationS + motionGraceMs(1000 * move.durationS);
   context.next = 'moving';
 }
 
-/** The limits are kept here too, whatever was checked before; a counted angle may be off by half a step of the motor. */
-function obstacleOn(draft: Draft, targetDeg: number): string | null {
+/**
+ * The limits are kept here too, whatever was checked before, those of a rotation for either of its moves; a counted angle may be off by half a
+ * step of the motor. A sentence; null where the move is free.
+ */
+function moveRefusal(draft: Draft, item: PlannedItem, { targetDeg }: SwingMove): string | null {
+  const motion = motionOf(draft.start.rig);
+  const homeDeg = rotationHomeDeg(item);
+  if (homeDeg !== null && item.step.kind === 'rotate') return rotationRefusals(item.step, motion, homeDeg)[0]?.message ?? null;
   const { angleDeg } = draft.context.moment;
   const wayDeg = targetDeg - angleDeg;
   const fromDeg = angleDeg + Math.sign(wayDeg) * Math.min(Math.abs(wayDeg), toleranceDeg(draft));
-  return pathObstacles(motionOf(draft.start.rig), fromDeg, targetDeg)[0]?.reason ?? null;
+  const [met] = pathObstacles(motion, fromDeg, targetDeg);
+  return met === undefined ? null : `the move is refused because ${met.reason}.`;
 }
 
 export function sendMove(draft: Draft, { targetDeg, speedDegS, accelerationDegS2 }: SwingMove, startUtcMs: number | null): string {
@@ -327,7 +339,7 @@ export function sendAhead(draft: Draft): void {
   const next = peekMove(draft, endUtcMs);
   if (next === null) return;
   const move = moveOf(next.item, draft.start.rig, context.moment.angleDeg);
-  if (obstacleOn(draft, move.targetDeg) !== null) return;
+  if (moveRefusal(draft, next.item, move) !== null) return;
   noteOrders(draft, next.drawn);
   const commandId = sendMove(draft, move, endUtcMs);
   context.ahead = { commandId, targetDeg: move.targetDeg, startUtcMs: endUtcMs, cancelled: false };

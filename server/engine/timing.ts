@@ -9,7 +9,10 @@ export const LATE_MS = 500;
 /** A move that was accepted and has not begun this long after its start time never will; more than the 5 s after which a link counts as lost. */
 export const BEGIN_GRACE_MS = 8_000;
 /** A motion may take this much longer than its profile before the run fails. */
-export const MOTION_GRACE_MS = 15_000;
+const MOTION_GRACE_MS = 15_000;
+/** The same for long motions: the clock of a controller may be that wrong (a ceramic resonator is good to half of it). */
+const MOTION_GRACE_SHARE = 0.01;
+export const motionGraceMs = (durationMs: number): number => MOTION_GRACE_MS + MOTION_GRACE_SHARE * durationMs;
 /** How long hold and stop wait for the controller's word before they are shown as not confirmed. */
 export const CONFIRM_MS = 60_000;
 /** A controller that has not answered by then never does. */

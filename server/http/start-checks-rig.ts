@@ -84,12 +84,16 @@ function stillCheck(controller: ControllerState | null): Outcome {
   return controller.moving ? fail('It is moving: wait until it stands still.') : pass('Stands still.');
 }
 
-function protocolCheck({ protocol, document, timeZone }: StartPlan, { controller, nowUtcMs, timeline, shuffleSeed }: Seen): Outcome {
+function protocolCheck(
+  { protocol, document, timeZone }: StartPlan,
+  { station, controller, nowUtcMs, timeline, shuffleSeed }: Seen,
+): Outcome {
   const figures = [
     { name: 'steps', value: timeline.items.length, unit: '' as const },
     { name: 'dwells', value: timeline.dwells, unit: '' as const },
   ];
-  const { refusals, advice } = lookAtStart({ protocol, rig: document, timeZone, shuffleSeed }, controller, nowUtcMs);
+  const limits = station?.link.limits() ?? null;
+  const { refusals, advice } = lookAtStart({ protocol, rig: document, timeZone, shuffleSeed }, { controller, limits }, nowUtcMs);
   const [first, ...others] = refusals;
   if (first === undefined && advice.length > 0) return note(advice.map(({ message }) => message).join(' '), ...figures);
   if (first === undefined) return pass('Every step can be carried out within the limits of the rig.', ...figures);
@@ -97,12 +101,12 @@ function protocolCheck({ protocol, document, timeZone }: StartPlan, { controller
   return fail(`${first.path === null ? '' : `Step ${first.path}: `}${first.message}${more}`, ...figures);
 }
 
-/** How far the plan stays from the nearest end of the travel: the rig's or, where it is nearer, the controller's own. */
+/** How far the plan stays from the nearest end of the travel: the rig's or, where it is nearer, the controller's own. Rotations are judged with the protocol. */
 function travelCheck({ document: { motion } }: StartPlan, { station, controller, timeline }: Seen): Outcome {
   if (motion === undefined) return note('The rig has no travel limits.');
   const own = station?.link.limits() ?? null;
   const [minDeg, maxDeg] = [Math.max(motion.minDeg, own?.leastDeg ?? -Infinity), Math.min(motion.maxDeg, own?.greatestDeg ?? Infinity)];
-  const targets = timeline.items.map(({ angleToDeg }) => angleToDeg);
+  const targets = timeline.items.flatMap(({ kind, angleToDeg }) => (kind === 'rotate' ? [] : [angleToDeg]));
   const angles = controller?.angleDeg == null ? targets : [controller.angleDeg, ...targets];
   if (angles.length === 0) return pass('Nothing turns.');
   const [least, greatest] = [Math.min(...angles), Math.max(...angles)];

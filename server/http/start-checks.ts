@@ -40,7 +40,7 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
   };
 }
 
-const moves = (item: TimelineItem) => item.kind === 'home' || item.kind === 'swing' || item.kind === 'kick';
+const moves = (item: TimelineItem) => ['home', 'swing', 'kick', 'rotate'].includes(item.kind);
 
 function firstMoveOf(timeline: Timeline): string {
   const first = timeline.items.find(moves);

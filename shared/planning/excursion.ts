@@ -103,6 +103,9 @@ function excursionBoundRad(rig: RigDocument, items: readonly TimelineItem[]): nu
   return greatest;
 }
 
+/** Hours of turning are worked out in steps of this length, s: the torque has no corners but at the ramps, and this is no evaluation. */
+const STEP_IN_ROTATION_S = 1;
+
 /** Looked at so often in a period. */
 const looksPerPeriod = 40;
 
@@ -123,7 +126,8 @@ export function peakExcursionRad(rig: RigDocument, timeline: Pick<Timeline, 'ite
   } catch {
     return null;
   }
-  const pendulum = new Pendulum({ geometry, oscillator, bigG }, { angleRad, speedRadS: 0 });
+  const slowly = items.some(({ kind }) => kind === 'rotate') ? { stepInMotionS: STEP_IN_ROTATION_S } : {};
+  const pendulum = new Pendulum({ geometry, oscillator, bigG, ...slowly }, { angleRad, speedRadS: 0 });
   const angleDegAt = anglesOf(items);
   const stepS = oscillator.periodS / looksPerPeriod;
   let peak = Math.abs(angleRad);

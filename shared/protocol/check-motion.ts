@@ -2,7 +2,7 @@ import type { RigDocument, RigMotion } from '../rig/document';
 import type { DwellStep, KickStep, ProtocolDocument, RotateStep, Step, SwingStep, SwingTarget } from './document';
 import { swingMove, UnplayableStep } from './durations';
 import type { Finding } from './finding';
-import { homingObstacle } from './homing';
+import { homingObstacle, isWound, woundFinding } from './homing';
 import { degrees, pathObstacles } from './motion-path';
 import { greatestPosition, rotationRefusals } from './rotation';
 import { MOST_SHUFFLED, shuffledChildren } from './shuffle';
@@ -48,6 +48,8 @@ export function motionFindings(document: ProtocolDocument, rig: RigDocument, sta
     });
   }
   if (rig.motion !== undefined) walk.findings.push(...rangeFindings(rig.motion));
+  if (rig.motion !== undefined && start?.angleDeg != null && isWound(rig.motion, start.angleDeg))
+    return [...walk.findings, woundFinding(rig.motion, start.angleDeg)];
   const last = afterList(document.steps, [{ angleDeg: start?.angleDeg ?? null, swingS: null }], { walk, prefix: '' });
   const station = document.atEnd?.station;
   if (station !== undefined) {

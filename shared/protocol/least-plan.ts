@@ -42,6 +42,7 @@ function afterStep(step: Step, rig: RigDocument, { angleDeg, swingS }: Before): 
     case 'swing':
       return afterSwing(step, rig, angleDeg);
     case 'kick':
+    case 'rotate':
       return { durationS: partsDurationS((angleDeg === null ? null : partsIfPossible(step, rig, angleDeg)) ?? []), angleDeg };
     case 'dwell':
       if (step.beat_periods !== undefined) return { durationS: Math.max(0, step.beat_periods * periodS - swingS), angleDeg };

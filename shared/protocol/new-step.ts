@@ -25,7 +25,7 @@ export function newStep(kind: StepKind, rig: RigDocument): Step {
     case 'prompt':
       return { kind, text: 'Hands clear of the rig' };
     case 'rotate':
-      return { kind, period_s: 1800, turns: 4 };
+      return { kind, period_s: 1800, turns: Math.min(4, Math.max(1, Math.floor(rig.motion?.turnsLimit ?? 0))) };
     case 'repeat':
       return { kind, times: 2, steps: [] };
   }

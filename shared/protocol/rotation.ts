@@ -1,3 +1,4 @@
+import { formatDuration } from '../lib/format-duration';
 import type { RigMotion } from '../rig/document';
 import type { RotateStep } from './document';
 import { degrees } from './motion-path';
@@ -15,7 +16,20 @@ export interface RotationRefusal {
 export const rotationEndDeg = ({ turns }: Pick<RotateStep, 'turns'>, fromDeg: number): number => fromDeg + 360 * turns;
 
 /** Speed of a rotation on its way out, deg/s. */
-export const rotationSpeedDegS = ({ period_s }: Pick<RotateStep, 'period_s'>): number => 360 / period_s;
+const rotationSpeedDegS = ({ period_s }: Pick<RotateStep, 'period_s'>): number => 360 / period_s;
+
+/** `3 turns clockwise, each in 30 min`. */
+export function turnsWords({ turns, period_s }: Pick<RotateStep, 'period_s' | 'turns'>): string {
+  const count = Math.abs(turns);
+  const way = turns > 0 ? 'counter-clockwise' : 'clockwise';
+  return count === 1 ? `a turn ${way} in ${formatDuration(period_s)}` : `${count} turns ${way}, each in ${formatDuration(period_s)}`;
+}
+
+/** The link writes whole thousandths of a microstep per second, rounded down: over hours the rest of one is minutes. At least one. */
+export function writtenSpeedDegS(step: Pick<RotateStep, 'period_s'>, { stepsPerDegree }: Pick<RigMotion, 'stepsPerDegree'>): number {
+  const thousandths = Math.floor(1000 * rotationSpeedDegS(step) * stepsPerDegree * (1 + 1e-12));
+  return Math.max(1, thousandths) / 1000 / stepsPerDegree;
+}
 
 /**
  * Everything for which a rotation is refused on a rig: it passes every angle, winds up the cables, and goes beyond `minDeg` and `maxDeg`, which do

@@ -47,14 +47,17 @@ function afterPart(part: StepPart, { utcMs, angleDeg, swingStartUtcMs }: PlanSta
 }
 
 /**
- * The state after a step if all goes by plan. A mark and a proof take no time; what a person ends and
- * the kinds that are not built yet count as none, a wait for a condition as long as the samples it needs, or as the step's limit where the most is asked for.
+ * The state after a step if all goes by plan. A mark and a proof take no time; what a person ends counts as none, a wait for a condition as long as the samples it needs, or as the step's limit where the most is asked for.
  * @throws UnplayableStep where the step cannot be carried out on the rig.
  */
 function stateAfter(item: StepItem, plan: Pick<CursorPlan, 'rig' | 'timeZone' | 'conditions'>, state: PlanState): PlanState {
   const { rig, timeZone } = plan;
   const { step, part } = item;
-  if (part !== undefined) return afterPart(part, state);
+  if (part !== undefined) {
+    const after = afterPart(part, state);
+    // A rotation is no swing that a beat could count from.
+    return step.kind === 'rotate' ? { ...after, swingStartUtcMs: null } : after;
+  }
   const at = (utcMs: number, angleDeg = state.angleDeg): PlanState => ({ utcMs, angleDeg, swingStartUtcMs: null });
   const waited = (of: LeafStep) => {
     const wait = waitOf(of);

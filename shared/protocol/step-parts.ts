@@ -7,12 +7,13 @@ import { movesByCentroid, type Slew, type TimedMove } from '../physics/timed-mov
 import { geometryOf } from '../physics/torque';
 import { trapezoid } from '../physics/trapezoid';
 import type { RigDocument } from '../rig/document';
-import type { KickStep, Step, SwingStep } from './document';
+import type { KickStep, RotateStep, Step, SwingStep } from './document';
 import { motionOf, swingMove, type SwingMove, UnplayableStep } from './durations';
 import { degrees } from './motion-path';
+import { rotationEndDeg, writtenSpeedDegS } from './rotation';
 import { resolveTarget, sideAt, stationAt } from './stations';
 
-/** What a shaped swing and a kick are made of: moves at given times, the pauses between them, and the ring-down after a kick. */
+/** What a shaped swing, a kick and a rotation are made of: moves at given times, the pauses between them, and the ring-down after a kick. */
 export type StepPart =
   /** `name`: a, b, …; `offsetS`: from the start of the first move. */
   | ({ kind: 'move'; name: string; offsetS: number } & SwingMove)
@@ -78,12 +79,12 @@ function standsAtDeg(rig: RigDocument, angleDeg: number): number {
 const isShaped = (step: Step): step is SwingStep => step.kind === 'swing' && step.profile === 'shaped';
 
 /**
- * The parts of a shaped swing or a kick from a turntable angle (deg), worked out once for a rig; null for a step that is not made of parts,
- * and for a shaped swing to where the sources stand already.
+ * The parts of a shaped swing, a kick or a rotation from a turntable angle (deg), worked out once for a rig; null for a step that is not made
+ * of parts, and for a shaped swing to where the sources stand already.
  * @throws UnplayableStep where the rig or its geometry does not allow it
  */
 export function partsOf(step: Step, rig: RigDocument, fromDeg: number): StepPart[] | null {
-  if (step.kind !== 'kick' && !isShaped(step)) return null;
+  if (step.kind !== 'kick' && step.kind !== 'rotate' && !isShaped(step)) return null;
   const startDeg = standsAtDeg(rig, fromDeg);
   const key = JSON.stringify([step, startDeg]);
   let kept = known.get(rig);
@@ -106,8 +107,9 @@ export function partsIfPossible(step: Step, rig: RigDocument, fromDeg: number): 
 
 const known = new WeakMap<RigDocument, Map<string, StepPart[] | UnplayableStep | null>>();
 
-function madeParts(step: KickStep | SwingStep, rig: RigDocument, fromDeg: number): StepPart[] | UnplayableStep | null {
+function madeParts(step: KickStep | RotateStep | SwingStep, rig: RigDocument, fromDeg: number): StepPart[] | UnplayableStep | null {
   try {
+    if (step.kind === 'rotate') return rotateParts(step, rig, fromDeg);
     return step.kind === 'kick' ? kickParts(step, rig, fromDeg) : shapedParts(step, rig, fromDeg);
   } catch (error) {
     if (error instanceof UnplayableStep) return error;
@@ -161,6 +163,28 @@ function kickParts(step: KickStep, rig: RigDocument, fromDeg: number): StepPart[
     ...timed(found.moves, { slew, rig }),
     { kind: 'ring-down', lengthS: (step.periods ?? ringDownPeriods) * setting.oscillator.periodS },
   ];
+}
+
+/** Out at the rate that is asked for, and back at once as fast as the rig turns: only the way out is evaluated. */
+function rotateParts(step: RotateStep, rig: RigDocument, fromDeg: number): StepPart[] {
+  const motion = motionOf(rig);
+  const toDeg = rotationEndDeg(step, fromDeg);
+  const out = turnPart(rig, { fromDeg, toDeg, ...slewOf(rig, { speed_deg_s: writtenSpeedDegS(step, motion) }) });
+  const back = turnPart(rig, { fromDeg: toDeg, toDeg: fromDeg, ...slewOf(rig, {}) });
+  return [
+    { kind: 'move', name: 'a', offsetS: 0, ...out },
+    { kind: 'move', name: 'b', offsetS: Math.round(1000 * out.durationS) / 1000, ...back },
+  ];
+}
+
+function turnPart(rig: RigDocument, { fromDeg, toDeg, ...slew }: Slew & { fromDeg: number; toDeg: number }): SwingMove {
+  return { targetDeg: toDeg, station: stationAt(rig, toDeg), ...slew, durationS: trapezoid({ fromDeg, toDeg, ...slew }).durationS };
+}
+
+/** Where a rotation of which this is a part began and ends, deg; null for any other part. */
+export function rotationHomeDeg({ step, part }: { step: Step; part?: StepPart }): number | null {
+  if (step.kind !== 'rotate' || part?.kind !== 'move') return null;
+  return part.name === 'a' ? rotationEndDeg({ turns: -step.turns }, part.targetDeg) : part.targetDeg;
 }
 
 function timed(moves: readonly TimedMove[], { slew, rig }: { slew: Slew; rig: RigDocument }): StepPart[] {

@@ -210,8 +210,8 @@ describe('unusable input ends with 2, a sentence, and no folder', () => {
       'atlantis',
     ],
     [
-      'a step that is not built',
-      [file('rotate.json', { formatVersion: 1, name: 'x', steps: [{ kind: 'home' }, { kind: 'rotate', period_s: 1800, turns: 2 }] })],
+      'what is not built',
+      [file('frame.json', { formatVersion: 1, name: 'x', steps: [{ kind: 'home' }, { kind: 'mark', label: 'x', frame: true }] })],
       'not-yet',
     ],
     ['a rig without motion', [short(), '--rig', file('motionless.json', { ...demoRigWide, motion: undefined })], 'motion'],

@@ -1,5 +1,5 @@
 import { View } from 'react-native';
-import { Body, Field, Label } from '@/components/ui';
+import { Field, Label } from '@/components/ui';
 import type { Step } from '@/shared/protocol/document';
 import type { RigDocument } from '@/shared/rig/document';
 import { DwellForm } from './dwell-form';
@@ -7,6 +7,7 @@ import { KickForm } from './kick-form';
 import { PromptForm } from './prompt-form';
 import { ProofForm } from './proof-form';
 import { RepeatForm } from './repeat-form';
+import { RotateForm } from './rotate-form';
 import { SettleForm } from './settle-form';
 import { SwingForm } from './swing-form';
 import { WaitForm } from './wait-form';
@@ -47,6 +48,8 @@ function OwnFields({ step, onChange, rig, fromDeg, disabled }: StepFormProps) {
       return <DwellForm step={step} {...common} />;
     case 'kick':
       return <KickForm step={step} {...common} />;
+    case 'rotate':
+      return <RotateForm step={step} {...common} />;
     case 'settle':
       return <SettleForm step={step} {...common} />;
     case 'wait':
@@ -61,12 +64,6 @@ function OwnFields({ step, onChange, rig, fromDeg, disabled }: StepFormProps) {
       return <Label>Turns slowly to the edge of the home flag; from then on the position is known.</Label>;
     case 'mark':
       return <Label>Takes no time.</Label>;
-    default:
-      return (
-        <Body>
-          This kind of step is part of the format but not of this version yet. Delete it to issue the protocol, or keep it for later.
-        </Body>
-      );
   }
 }
 

@@ -3,6 +3,7 @@ import * as reviewContracts from '@/shared/contracts/reviews';
 import * as contracts from '@/shared/contracts/runs';
 import { formatDegrees } from '@/shared/lib/format-angle';
 import type { LeafStep } from '@/shared/protocol/cursor';
+import { turnsWords } from '@/shared/protocol/rotation';
 import type { RigDocument } from '@/shared/rig/document';
 import { resumePlan, skipPlan, type RemainingPlan } from '@/server/engine/remaining-plan';
 import type { RunDriver } from '@/server/engine/run-driver';
@@ -111,16 +112,17 @@ const reviewRoutes = [
   }),
 ];
 
-const remainingOf = ({ dwellsLeft, finishUtcMs, next, firstMotion, relativeU }: RemainingPlan, rig: RigDocument) => ({
+const remainingOf = ({ dwellsLeft, finishUtcMs, next, firstMotion, turnsBack, relativeU }: RemainingPlan, rig: RigDocument) => ({
   dwellsLeft,
   next,
   finishAt: isoOf(finishUtcMs),
-  firstMove: firstMotion === null ? 'nothing moves' : moveWords(firstMotion, rig),
+  firstMove: firstMotion === null ? 'nothing moves' : turnsBack ? 'rotate: turn back to where it began' : moveWords(firstMotion, rig),
   plannedU: relativeU,
 });
 
 function moveWords(step: LeafStep, { stations }: RigDocument): string {
   if (step.kind === 'kick') return 'kick: there and back again';
+  if (step.kind === 'rotate') return `rotate: ${turnsWords(step)}, then back again`;
   if (step.kind !== 'swing') return 'home: find the edge of the home flag';
   if (typeof step.to !== 'string') return `swing to ${formatDegrees(step.to.angle_deg)}`;
   const station = stations[step.to];

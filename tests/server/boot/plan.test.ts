@@ -145,9 +145,9 @@ describe('unusable input ends with 2, nothing on stdout and the reason on stderr
       'keep-out arc 40° to 60°',
     ],
     [
-      'a step that is not built yet',
-      () => [file('g.json', protocol([{ kind: 'home' }, { kind: 'rotate', period_s: 1800, turns: 2 }]))],
-      '2.rotate: The step kind "rotate" is not built yet',
+      'what is not built yet',
+      () => [file('g.json', protocol([{ kind: 'home' }, { kind: 'mark', label: 'x', frame: true }]))],
+      '2.mark: Camera frames are not built yet',
     ],
     [
       'a rig that does not fit its format',

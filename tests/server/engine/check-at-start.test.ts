@@ -5,7 +5,9 @@ import { demoRigWide } from '@/shared/rig/demo-rigs';
 
 const protocol = templateById('near-far-short')?.make(demoRigWide) as ProtocolDocument;
 const codes = (rig: typeof demoRigWide, angleDeg: number | null = 0) =>
-  checkAtStart({ protocol, rig, timeZone: 'UTC' }, { positionKnown: angleDeg !== null, angleDeg }, 0).map(({ code }) => code);
+  checkAtStart({ protocol, rig, timeZone: 'UTC' }, { controller: { positionKnown: angleDeg !== null, angleDeg }, limits: null }, 0).map(
+    ({ code }) => code,
+  );
 
 test('a run in which the pendulum would swing out beyond 0.8 of its travel, or leave the range of the readout, is refused', () => {
   const within = (travel_rad: number) => ({
@@ -37,7 +39,7 @@ test('of a shuffled protocol the order is judged that the run will have', () => 
     timeZone: 'UTC',
   };
   const controller = { positionKnown: true, angleDeg: 0 };
-  const codesOf = (shuffleSeed: number) => checkAtStart({ ...run, shuffleSeed }, controller, 0).map(({ code }) => code);
+  const codesOf = (shuffleSeed: number) => checkAtStart({ ...run, shuffleSeed }, { controller, limits: null }, 0).map(({ code }) => code);
   // Near and far by turns, every half period, swing it up to 8.2 mrad; where two of a kind come together it swings back: 3.9 mrad. The limit is 6.
   expect(codesOf(1)).toEqual([]);
   expect(codesOf(6)).toEqual(['excursion']);

@@ -250,6 +250,19 @@ test('a rig whose way to the edge may not be free homes only when somebody says 
   expect(state()?.order).toMatchObject({ kind: 'home', state: 'done' });
 });
 
+test('a table that a rotation has left wound up is not homed, whoever looks, before nudges bring it back into its travel', async () => {
+  const turning: RigMotion = { ...(demoRigWide.motion as RigMotion), turnsLimit: 2 };
+  const { moves, asked, stay, link } = await begun(turning, { startDeg: 220 });
+  for (const intoKeepOut of [false, true])
+    expect(refusal(() => moves.order(asked, { ...home, intoKeepOut })).message).toMatch(
+      /stands at 220\.005°, wound up .* by nudges first\.$/,
+    );
+  moves.order(asked, nudge(-longestNudgeSteps(turning, link)));
+  await stay(120);
+  expect(link.controller()?.angleDeg).toBeLessThan(175);
+  expect(moves.order(asked, home).state.order).toMatchObject({ kind: 'home', state: 'sent' });
+});
+
 test('one person at a time, and ending gives the rig free and holds what moves', async () => {
   const { moves, rig, asked, stay, state } = await begun();
   expect(refusal(() => moves.begin(rig, { id: 'u-2', name: 'Second' }, 's-2'))).toMatchObject({ code: 'rig-busy' });

@@ -43,10 +43,10 @@ const refusedStarts: { when: string; more: Partial<RunStart>; code: string; word
     words: 'nowhere',
   },
   {
-    when: 'with a step that is not built',
-    more: { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'rotate', period_s: 1800, turns: 2 }] } },
+    when: 'with what is not built',
+    more: { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'mark', label: 'x', frame: true }] } },
     code: 'not-yet',
-    words: 'rotate',
+    words: 'Camera frames',
   },
   { when: 'on a rig without a link', more: { rigId: 'west-bench' }, code: 'not-ready', words: 'no link' },
 ];

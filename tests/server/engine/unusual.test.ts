@@ -20,9 +20,9 @@ async function expectFailed(bench: Bench, words: string): Promise<void> {
 
 test.each([
   [
-    'a step kind of a later version',
+    'more turns than the cables stand',
     withSteps({ kind: 'rotate', period_s: 1800, turns: 2 }),
-    '2.rotate: rotate cannot be run by this version',
+    '2.rotate.a: turns 2 winds the cables further than motion.turnsLimit 0',
   ],
   ['a station the rig does not have', withSteps({ kind: 'swing', to: 'atlantis' }), '2.swing: The rig has no station "atlantis"'],
   [

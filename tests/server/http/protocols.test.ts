@@ -140,15 +140,11 @@ describe('a revision', () => {
     const made = await make('Later', {
       formatVersion: 1,
       name: 'Later',
-      steps: [{ kind: 'home' }, { kind: 'rotate', period_s: 60, turns: 2 }],
+      steps: [{ kind: 'home' }, { kind: 'mark', label: 'x', frame: true }],
     });
     const answer = await issue(made.id, made.etag).expect(422);
     expect(answer.body.code).toBe('not-yet');
-    // The rig would not do either: its cables are not known to stand a turn.
-    expect(answer.body.errors).toMatchObject([
-      { path: '2.rotate', code: 'not-yet' },
-      { path: '2.rotate', code: 'turns-limit' },
-    ]);
+    expect(answer.body.errors).toMatchObject([{ path: '2.mark', code: 'not-yet' }]);
   });
 
   test('with a number that is none is unknown', async () => {

@@ -35,4 +35,13 @@ describe('whether a rig may home by itself', () => {
     expect(homingObstacle(rig, 90)).toBeNull();
     expect(homingObstacle(rig, 120)).toMatch(/from 120° to the edge is not free/);
   });
+
+  test('a table that may make whole turns does not, where a rotation may have left it wound up: the flag does not count turns', () => {
+    const turning = with_(demoRigWide, { turnsLimit: 3 });
+    expect(homingObstacle(turning, null)).toMatch(/left its cables wound up \(motion.turnsLimit 3\)/);
+    expect(homingObstacle(turning, 400)).toMatch(/stands at 400°, wound up/);
+    expect(homingObstacle(turning, -175)).toBeNull();
+    expect(homingObstacle(turning, 175 + 0.5 / (16_000 / 360))).toBeNull();
+    expect(homingObstacle(with_(demoRigWide, { turnsLimit: 0.5 }), null)).toBeNull();
+  });
 });
