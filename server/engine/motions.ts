@@ -46,6 +46,8 @@ export function noteBegan(draft: Draft): void {
   const { context, event } = draft;
   const { step, motion } = draft;
   const seen = event.type === 'link.motion-began';
+  // Told again, as to a server that takes the run up and does not know the controller's clock as well yet.
+  if (seen && motion.began && draft.stamp.uS >= step.row.uStartS) return;
   const stamp = seen ? inOrder(draft.stamp, step.row) : unseenBeginning(draft);
   motion.began = true;
   draft.controller.warningDue = false;

@@ -122,7 +122,11 @@ function locked(archive: Archive, channel: string, { analysis, offsetS }: { anal
     solution = solved(records, { fits, biases, pendulum, startG: before });
     if (judged === null && Math.abs(solution.bigG - before) <= settled * Math.abs(before)) break;
     if (judged === null) continue;
-    trust = judged;
+    // A rotation of which nothing is trusted any more is left out, where another is left.
+    const left = [...records.keys()].filter((i) => turnsThere(records[i] as RotationRecord, judged[i] ?? null) > 0);
+    if (left.length === 0) break;
+    const ofThese = <T>(all: readonly T[]) => left.map((i) => all[i] as T);
+    [records, trust, biases, ringing] = [ofThese(records), ofThese(judged), ofThese(biases), ofThese(ringing)];
     fits = records.map((record, i) => plainFit(record, trust[i] ?? null));
   }
   return { records, fits, biases, trust, solution, scale, offsetS };

@@ -99,6 +99,20 @@ describe('the commands', () => {
     expect(Math.abs((result.G?.value ?? NaN) / CODATA_2022_G.value - 1)).toBeLessThan(1e-4);
   }, 120_000);
 
+  test('a rotation whose server died in mid-turn goes on, keeps the instant at which it began, and gives the same G', async () => {
+    const steps = [{ kind: 'home' }, { kind: 'rotate', period_s: 1800, turns: 4 }, { kind: 'rotate', period_s: 1800, turns: -2 }];
+    const document = { ...protocol(4, 1800), steps, onInterruption: 'resume', evaluation: { method: 'modulation' } } as ProtocolDocument;
+    const { code, told, out } = await rehearsed(document, ['--rate', '2', '--fault', 'server-kill@3000']);
+    expect({ code, told }).toEqual({ code: 0, told: expect.stringContaining('"outcome":"finished"') });
+    const archive = readArchive(readArchiveFiles(out), sha256Hex);
+    const [broken, late] = archive.steps.filter(({ path }) => path === '2.rotate.a');
+    expect([broken?.outcome, late?.outcome]).toEqual(['cut short', 'late']);
+    // Not what the next server makes of it, which has only just met the controller's clock.
+    expect(broken?.uStartS).toBeLessThan(0.001);
+    const { G } = evaluateArchive(archive, {}).result;
+    expect(Math.abs((G?.value ?? NaN) / CODATA_2022_G.value - 1)).toBeLessThan(1e-4);
+  }, 120_000);
+
   test('the reference firmware turns it just so', async () => {
     const { code, told, out } = await rehearsed(protocol(1, 66), ['--board']);
     expect({ code, told }).toEqual({ code: 0, told: expect.stringContaining('"outcome":"finished"') });
