@@ -24,7 +24,7 @@ const cluster = await startCluster('lab');
 const databaseUrl = await cluster.ensureDatabase('evenfall');
 const port = process.env.PORT ?? String((await isFree(usualPort)) ? usualPort : await freePort());
 
-const server = spawn(process.execPath, ['--import', 'tsx', 'server/boot/main.ts'], {
+const server = spawn(process.execPath, ['scripts/serve.mjs'], {
   cwd: root,
   stdio: ['ignore', 'pipe', 'inherit'],
   env: { ...process.env, NODE_ENV: 'production', DATABASE_URL: databaseUrl, PORT: port, EVENFALL_DEMO: '1', EVENFALL_STATE_DIR: state },

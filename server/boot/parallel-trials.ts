@@ -16,7 +16,7 @@ export interface TrialCrew {
 
 export function createTrialCrew(trials: number): TrialCrew {
   const helpers = trials < worthThreads ? 0 : Math.min(mostThreads, availableParallelism()) - 1;
-  const workers = Array.from({ length: helpers }, () => new Worker(threadOf('trials-worker.ts'), { eval: true, execArgv: [] }));
+  const workers = Array.from({ length: helpers }, () => new Worker(threadOf('trials-worker'), { eval: true, execArgv: [] }));
   const blocks = blocksOf(trials);
   const share = Math.ceil(blocks / (helpers + 1));
   return {

@@ -31,7 +31,7 @@ export function startWatchdog(limits: Omit<WatchdogSetting, 'shared'>): { stop()
   beat();
   const timer = setInterval(beat, BEAT_MS);
   timer.unref();
-  const worker = new Worker(threadOf('watchdog-thread.ts'), { eval: true, execArgv: [], workerData: { ...limits, shared } });
+  const worker = new Worker(threadOf('watchdog-thread'), { eval: true, execArgv: [], workerData: { ...limits, shared } });
   worker.unref();
   return {
     stop: async () => {

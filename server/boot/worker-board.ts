@@ -26,7 +26,7 @@ class WorkerBoardHost implements BoardHost {
   ) {
     this.time = machineTimeOf(clock);
     this.track = new StepTrack(stepsOfDeg(setting.rig, setting.rig.homeDeg));
-    this.worker = new Worker(threadOf('board-thread.ts'), {
+    this.worker = new Worker(threadOf('board-thread'), {
       eval: true,
       execArgv: [],
       workerData: { ...setting, factor: factorOf(clock) },

@@ -4,8 +4,14 @@ import { CutShort } from '../interfaces/jobs';
 import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { WorkerAnswer, WorkerCall } from './worker-thread';
 
-/** Node 20 carries no loader hooks into a thread, so the thread itself brings TypeScript in before it loads a file of this folder. */
-export const threadOf = (file: string) => `require('tsx/cjs'); require(${JSON.stringify(join(__dirname, file))});`;
+/**
+ * What a thread runs to load a file of this folder. Of a built server its file beside this one is loaded; otherwise the thread itself brings TypeScript in, since
+ * Node 20 carries no loader hooks into a thread.
+ */
+export const threadOf = (name: string): string =>
+  __filename.endsWith('.ts')
+    ? `require('tsx/cjs'); require(${JSON.stringify(join(__dirname, `${name}.ts`))});`
+    : `process.setSourceMapsEnabled(true); require(${JSON.stringify(join(__filename, '..', `${name}.js`))});`;
 
 interface Pending {
   resolve(value: unknown): void;
@@ -35,7 +41,7 @@ class Lane {
   }
 
   private begin(): Worker {
-    const worker = new Worker(threadOf('worker-thread.ts'), { eval: true, execArgv: [] });
+    const worker = new Worker(threadOf('worker-thread'), { eval: true, execArgv: [] });
     worker.unref();
     worker.on('message', (answer: WorkerAnswer) => this.answered(answer));
     worker.on('error', (error: Error) => this.broken(worker, error));

@@ -22,7 +22,7 @@ export class ServerProcess {
 
   /** Resolves as soon as the server says that it listens. */
   static async start({ databaseUrl, stateDir, env }: ServerSetting): Promise<ServerProcess> {
-    const child = spawn(process.execPath, ['--import', 'tsx', 'server/boot/main.ts'], {
+    const child = spawn(process.execPath, ['scripts/serve.mjs'], {
       cwd: root,
       stdio: ['ignore', 'pipe', 'inherit'],
       env: {

@@ -4,6 +4,7 @@ import type { LiveMessages, RunView } from '@/shared/contracts/runs';
 import type { Clock } from '@/server/interfaces/clock';
 import type { LiveChange } from '@/server/interfaces/process-post';
 import type { SignedIn } from '../route-context';
+import { once } from '../once';
 import { encodeEvent } from './event-stream';
 import { type Reader, Readers } from './readers';
 import { RecentChanges } from './recent-changes';
@@ -206,12 +207,6 @@ function encodeChange({ events, steps, progress }: Omit<LiveChange, 'progress'> 
     ...steps.map((step) => encodeEvent('step', step, null)),
     progress === null ? '' : encodeEvent('progress', progress, progress.lastSeq),
   ].join('');
-}
-
-/** The first call makes the value, later ones give it again. */
-function once<T>(make: () => T): () => T {
-  let made: { value: T } | null = null;
-  return () => (made ??= { value: make() }).value;
 }
 
 /** Batches of one channel as one message. */

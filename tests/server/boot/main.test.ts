@@ -15,7 +15,7 @@ const state = mkdtempSync(join(tmpdir(), 'evenfall-state-'));
 afterAll(() => rmSync(state, { recursive: true }));
 
 function start(environment: Record<string, string>): { child: ChildProcess; said: Promise<string>; complaints: () => string } {
-  const child = spawn(process.execPath, ['--import', 'tsx', 'server/boot/main.ts'], {
+  const child = spawn(process.execPath, ['scripts/serve.mjs'], {
     cwd: root,
     env: { PATH: process.env.PATH ?? '', ...environment } as unknown as NodeJS.ProcessEnv,
     stdio: ['ignore', 'pipe', 'pipe'],

@@ -40,7 +40,7 @@ const database = databaseOfThisFile();
 async function begin(role: string): Promise<{ listening: string | null; roles: string[] }> {
   const state = mkdtempSync(join(tmpdir(), `evenfall-${role}-`));
   folders.push(state);
-  const child = spawn(process.execPath, ['--import', 'tsx', 'server/boot/main.ts'], {
+  const child = spawn(process.execPath, ['scripts/serve.mjs'], {
     cwd: root,
     env: {
       ...{ PATH: process.env.PATH ?? '', NODE_ENV: 'production', DATABASE_URL: database().url, PORT: '0', EVENFALL_LOG_LEVEL: 'fatal' },
