@@ -7,6 +7,7 @@ import type { RunView } from '@/shared/contracts/runs';
 import { PositionFacts } from '@/components/rigs/position-facts';
 import { LockedNotice } from '@/components/rigs/lock-panel';
 import { AfterDwell } from './after-dwell';
+import { FinishEarly } from './finish-early';
 import { ControlBar } from './control-bar';
 import { HeldNotice } from './held-notice';
 import { linkAge } from './link-age';
@@ -77,6 +78,8 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
   const plan = <PlanPanel view={view} rows={state.rows} beat={state.beat} lost={lost} large={wide} />;
   // One that waits is to be seen, and to be withdrawn, without scrolling.
   const afterDwell = <AfterDwell view={view} timeZone={timeZone} serverNowMs={serverNowMs} onTap={() => tap('hold-after-dwell')} />;
+  const finish = <FinishEarly view={view} timeZone={timeZone} />;
+  const isFinishing = view.finishing !== null && view.finishing.withdrawnBy === null;
   const log = <RecentSteps runId={view.id} protocol={view.protocol} rows={state.rows} timeZone={timeZone} count={wide ? 7 : 4} />;
   return (
     <Screen
@@ -100,9 +103,11 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
       <HeldNotice view={view} timeZone={timeZone} serverNowMs={serverNowMs} />
       <WaitingPanel view={view} timeZone={timeZone} serverNowMs={serverNowMs} />
       {view.holdAfterDwell ? afterDwell : null}
+      {isFinishing ? finish : null}
       <LiveStrip strip={strip} timeZone={timeZone} serverNowMs={serverNowMs} title={`${view.rigName}, ${view.protocolName}`} lost={lost} />
       <ReachedPanel view={view} />
       {view.holdAfterDwell ? null : afterDwell}
+      {isFinishing ? null : finish}
       {wide ? null : plan}
       {wide ? null : log}
       <Facts view={view} />

@@ -10,6 +10,7 @@ import { getRun, listSteps, stepsCsv, stepsJson, type StepRowView } from '@/shar
 import { zoneName } from '@/shared/lib/format-time';
 import { DownloadLink } from './download-link';
 import { ChainHead } from './event-list';
+import { TextLink } from './recent-steps';
 import { isOver } from './run-words';
 import { StepDetails, stretchOf } from './step-details';
 import { everything, filterChoices, filterSteps, noFilter, type StepFilter } from './step-filter';
@@ -66,6 +67,7 @@ function Downloads({ runId }: { runId: string }) {
   const asked = { params: { labId, runId } };
   return (
     <View className="flex-row">
+      <TextLink href={`/runs/${runId}/compare`} label="Compare" />
       <DownloadLink address={addressOf(stepsCsv, asked)} label="CSV" fileName={`steps-${runId}.csv`} testID="steps-csv" />
       <DownloadLink address={addressOf(stepsJson, asked)} label="JSON" fileName={`steps-${runId}.json`} testID="steps-json" />
     </View>

@@ -31,6 +31,7 @@ export const AlarmScreen = screen('AlarmScreen');
 export const AlarmsScreen = screen('AlarmsScreen');
 export const AuditScreen = screen('AuditScreen');
 export const CalendarScreen = screen('CalendarScreen');
+export const CompareRunsScreen = screen('CompareRunsScreen');
 export const DataScreen = screen('DataScreen');
 export const DoorScreen = screen('DoorScreen');
 export const EditorScreen = screen('EditorScreen');

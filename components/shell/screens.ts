@@ -23,5 +23,6 @@ export { StationsScreen } from '@/components/rigs/stations-screen';
 export { RunScreen } from '@/components/runs/run-screen';
 export { RunningBar } from '@/components/runs/running-bar';
 export { RunsScreen } from '@/components/runs/runs-screen';
+export { CompareRunsScreen } from '@/components/runs/compare-screen';
 export { StepLogScreen } from '@/components/runs/step-log-screen';
 export { SpotScreen } from '@/components/spot/spot-screen';

@@ -74,7 +74,8 @@ function forgetOld(kept) {
 export async function ensureServerBuild({ base = root, kept = join(state, 'server'), files = entries } = {}) {
   const note = join(kept, 'build.json');
   const last = existsSync(note) ? JSON.parse(readFileSync(note, 'utf8')) : null;
-  if (last !== null && existsSync(join(kept, last.folder)) && last.inputs.every((mark) => isSame(base, mark))) return join(kept, last.folder);
+  if (last !== null && existsSync(join(kept, last.folder)) && last.inputs.every((mark) => isSame(base, mark)))
+    return join(kept, last.folder);
   mkdirSync(kept, { recursive: true });
   const fresh = join(kept, `new-${process.pid}`);
   try {

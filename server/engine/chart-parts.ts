@@ -1,3 +1,4 @@
+import { finishEarly, finishRefusal, isFinishing, refuseFinish, refuseWithdrawFinish, withdrawFinish } from './finishing';
 import { setup } from 'xstate';
 import type { RunStart } from '@/shared/archive/run-records';
 import { Draft, type Output } from './draft';
@@ -196,9 +197,19 @@ export const heard = {
 /** A controller that restarted, or lost interlock or supply, while nobody listened. */
 export const returns = [...guarded(bootedAnew, gravely(noteReset, noteReady)), ...guarded(disturbedUnseen, gravely(noteReady))];
 
+/** The end of the run, before that of its protocol or not. */
+export const finishes = {
+  'finish-early': [{ guard: when((draft) => finishRefusal(draft) === null), actions: act(finishEarly) }, { actions: act(refuseFinish) }],
+  'withdraw-finish': [
+    { guard: ({ context }: Told) => isFinishing(context.run), actions: act(withdrawFinish) },
+    { actions: act(refuseWithdrawFinish) },
+  ],
+};
+
 /** What ends or changes a run that is under way, whatever step it is in. */
 export const underWay = {
   ...heard,
+  ...finishes,
   'link.edge': [
     { guard: when(hasSlipped, noteEdge), target: 'holding' as const, actions: act(noteEdge, beginHold) },
     { actions: act(noteEdge) },
@@ -233,6 +244,8 @@ export const skips = [
 /** Asked for too late: nothing waits for the end of a step any more, and nothing is under way. */
 export const refusedAtRest = {
   'withdraw-hold': { actions: act(noteRefusedWithdrawal) },
+  'finish-early': { actions: act(refuseFinish) },
+  'withdraw-finish': { actions: act(refuseWithdrawFinish) },
   skip: { actions: act(noteRefusedSkip) },
 };
 

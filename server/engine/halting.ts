@@ -3,6 +3,7 @@ import { startRun } from './beginning';
 import type { Draft } from './draft';
 import type { ActiveStep, InterruptionCause, KnownController, RunEvent } from './run-context';
 import { finishMotion, reachedTarget, takeAhead, untoldEdge } from './motions';
+import { finishedWords } from './finishing';
 import { slipRefusal } from './position';
 import { predictEndUtcMs } from './predicted-end';
 import { awaits, beginAwaiting } from './awaiting';
@@ -357,8 +358,10 @@ export function becomeFinished(draft: Draft): void {
   }
   end(draft, moment.utcMs);
   const why = asked && !release ? { driversWhy: 'the rig is not marked as safe when free (motion.safeWhenFree)' } : {};
-  draft.log('finished', { dwells: context.dwellsDone, drivers: release ? 'release' : 'keep', ...why }, moment);
-  draft.notify('finished', 'The run finished as planned.');
+  const early = finishedWords(context);
+  const before = early === '' ? {} : { early: early.slice(2) };
+  draft.log('finished', { dwells: context.dwellsDone, drivers: release ? 'release' : 'keep', ...why, ...before }, moment);
+  draft.notify('finished', early === '' ? 'The run finished as planned.' : `The run finished${early}.`);
 }
 
 /** Nothing is left moving: a stop goes out with the failure. */

@@ -5,6 +5,7 @@ import { moveOf } from '@/shared/protocol/step-parts';
 import type { Instant } from '../interfaces/clock';
 import type { MotionSent } from '../interfaces/turntable-link';
 import type { Draft } from './draft';
+import { heedFinishing } from './finishing';
 import type { RunSnapshot } from './run-context';
 import { noteOrders } from './orders';
 import { forgetPosition, noteHomed } from './position';
@@ -35,6 +36,7 @@ export function takeAhead(draft: Draft): void {
     if (item.part?.kind === 'move' || (item.part === undefined && item.step.kind === 'swing')) {
       openSwing(draft, { item, commandId: ahead.commandId, startUtcMs: ahead.startUtcMs, late: false });
       noteBegan(draft);
+      heedFinishing(context);
       return;
     }
     writeMark(draft, item);

@@ -102,6 +102,17 @@ export interface Interruption {
   sinceUtcMs: number;
 }
 
+/** The run ends early, on a whole pair: because somebody asked for it, or the night window ends. */
+export interface Finishing {
+  /** Who asked; empty: the night window of the room. */
+  by: string;
+  askedUtcMs: number;
+  /** The run is to be over by then; null: with the pair under way. */
+  finishByUtcMs: number | null;
+  /** Who took it back: the run goes on to the end of its protocol, and the window does not ask again; null: nobody. */
+  withdrawnBy: string | null;
+}
+
 export type InterventionKind = 'hold' | 'hold-after-dwell' | 'hold-withdrawn' | 'resume' | 'skip' | 'stop';
 
 export interface Intervention {
@@ -191,6 +202,8 @@ export interface RunContext {
   ordersTold?: string[];
   /** The pair that the dwells so far have left open. */
   pair: OpenPair;
+  /** That it ends before the end of its protocol; absent: nobody ever asked. */
+  finishing?: Finishing;
   /** Set by `hold after this dwell`. */
   holdAfterStep: string | null;
   intervention: Intervention | null;
@@ -225,6 +238,9 @@ export type RunEvent =
   | Told<'stop', { by: string; acted: string | null }>
   | Told<'hold-after-dwell', { by: string }>
   | Told<'withdraw-hold', { by: string }>
+  /** To end on a whole pair; `by` empty: for the night window, which ends at `finishByUtcMs`. */
+  | Told<'finish-early', { by: string; finishByUtcMs: number | null }>
+  | Told<'withdraw-finish', { by: string }>
   | Told<'resume', { by: string; arm: Arm | null }>
   /** Leaves out the rest of the step whose row this is. */
   | Told<'skip', { by: string; arm: Arm | null; seq: number }>

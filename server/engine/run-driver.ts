@@ -8,7 +8,7 @@ import { openMotions } from './motions';
 import { beginRun, deadlineOf, isArmExpected, isRunOver, isUnderWay, wantsMotion } from './chart';
 import { type Advance, CHART_VERSION, type Effect, type RunEvent, type RunSnapshot } from './run-context';
 import { advanceSafely } from './advance-safely';
-import { createPredictor, factsOf, plannedDwells, type RunFacts, summaryOf, withDatabase } from './run-facts';
+import { createPredictor, factsOf, plannedRun, type PlannedRun, type RunFacts, summaryOf, withDatabase } from './run-facts';
 import { type Answer, readyController, type RunChange, type RunDriverParts } from './run-driver-parts';
 import { RunRequests } from './run-requests';
 import { lookedInto } from './look';
@@ -44,7 +44,7 @@ export class RunDriver {
   private readonly waiting: (() => void)[] = [];
   private readonly predict: (snapshot: RunSnapshot, nowUtcMs: number) => number | null;
   private readonly unsubscribe: () => void;
-  private dwellsPlanned: number | null = null;
+  private planned: PlannedRun | null = null;
 
   constructor(readonly parts: RunDriverParts) {
     const { start, stored, clock, link, store } = parts;
@@ -129,11 +129,11 @@ export class RunDriver {
   facts(): RunFacts {
     const { start, armNow } = this.parts;
     const nowUtcMs = this.now().utcMs;
-    this.dwellsPlanned ??= plannedDwells(start, this.snapshot.context.startedAtUtcMs ?? nowUtcMs);
-    const { snapshot, dwellsPlanned } = this;
+    this.planned ??= plannedRun(start, this.snapshot.context.startedAtUtcMs ?? nowUtcMs);
+    const { snapshot, planned } = this;
     const predictedEndUtcMs = this.predict(snapshot, nowUtcMs);
     const standing = { arm: armNow(), lockedBy: this.lockedBy(), lastSeq: this.chain.seq };
-    const facts = factsOf({ start, snapshot, nowUtcMs, ...standing, predictedEndUtcMs, dwellsPlanned });
+    const facts = factsOf({ start, snapshot, nowUtcMs, ...standing, predictedEndUtcMs, planned });
     return withDatabase(facts, this.databaseAwaySinceUtcMs);
   }
 

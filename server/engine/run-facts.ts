@@ -8,7 +8,7 @@ import { confirmRefusal } from './awaiting';
 import { Draft, nothingOut } from './draft';
 import { resumeRefusal } from './halting';
 import { predictEndUtcMs } from './predicted-end';
-import type { Arm, ChartState, InterventionKind, KnownPosition, RunSnapshot, Waiting } from './run-context';
+import type { Arm, ChartState, Finishing, InterventionKind, KnownPosition, RunSnapshot, Waiting } from './run-context';
 import { skipRefusal } from './skipping';
 
 /** What screens and lists show of a run, read off its snapshot. */
@@ -27,7 +27,11 @@ export interface RunFacts {
   deadlineUtcMs: number | null;
   dwellsDone: number;
   dwellsPlanned: number;
+  /** The end of the plan as it stood at the start. */
+  plannedEndUtcMs: number;
   holdAfterDwell: boolean;
+  /** That it ends, or was to end, before the end of its protocol; null: nobody asked. */
+  finishing: Finishing | null;
   dwellsGood: number;
   /** Dwells that are done and not good for no other reason than that somebody skipped the other of their pair. */
   dwellsUnpaired: number;
@@ -127,10 +131,10 @@ export interface FactsInput {
   lockedBy: string | null;
   lastSeq: number;
   predictedEndUtcMs: number | null;
-  dwellsPlanned: number;
+  planned: PlannedRun;
 }
 
-export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, predictedEndUtcMs, dwellsPlanned }: FactsInput): RunFacts {
+export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, predictedEndUtcMs, planned }: FactsInput): RunFacts {
   const { context } = snapshot;
   const open = context.step !== null && context.step.row.outcome === null ? context.step.row : null;
   const { intervention } = context;
@@ -146,8 +150,10 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, pre
     current: open,
     deadlineUtcMs: open?.plannedEndUtcMs ?? null,
     dwellsDone: context.dwellsDone,
-    dwellsPlanned,
+    dwellsPlanned: planned.dwells,
+    plannedEndUtcMs: planned.endUtcMs,
     holdAfterDwell: context.holdAfterStep !== null,
+    finishing: context.finishing ?? null,
     dwellsGood: context.dwellsGood,
     dwellsUnpaired: context.dwellsUnpaired ?? 0,
     waiting: waitingFacts(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy }),
@@ -187,15 +193,22 @@ export function withDatabase(facts: RunFacts, awaySinceUtcMs: number | null): Ru
   return { ...facts, reason: `${facts.reason} ${away}`.trim() };
 }
 
-/** Dwells of the plan as it stood at the start. */
-export function plannedDwells(start: RunStart, fromUtcMs: number): number {
-  return planTimeline(start, { utcMs: fromUtcMs, angleDeg: start.rig.motion?.homeDeg ?? 0 }).dwells;
+export interface PlannedRun {
+  dwells: number;
+  endUtcMs: number;
+}
+
+/** The plan as it stood at the start. */
+export function plannedRun(start: RunStart, fromUtcMs: number): PlannedRun {
+  const { dwells, endUtcMs } = planTimeline(start, { utcMs: fromUtcMs, angleDeg: start.rig.motion?.homeDeg ?? 0 });
+  return { dwells, endUtcMs };
 }
 
 /** Keeps the predicted finish and works it out anew only when the run is off what was predicted. */
 export function createPredictor(start: RunStart): (snapshot: RunSnapshot, nowUtcMs: number) => number | null {
   let expected = new Map<string, number>();
   let endUtcMs: number | null = null;
+  let finishBy: number | undefined;
   return (snapshot, nowUtcMs) => {
     const { context, state } = snapshot;
     if (context.startedAtUtcMs === null) return null;
@@ -203,7 +216,9 @@ export function createPredictor(start: RunStart): (snapshot: RunSnapshot, nowUtc
     if (context.endedAtUtcMs !== null) return context.endedAtUtcMs;
     const row = context.step?.row;
     const due = row === undefined ? undefined : expected.get(row.path);
-    if (endUtcMs !== null && row !== undefined && due !== undefined && Math.abs(row.startUtcMs - due) < 1000) return endUtcMs;
+    const changed = finishBy !== context.cursor.finishByUtcMs;
+    finishBy = context.cursor.finishByUtcMs;
+    if (!changed && endUtcMs !== null && row !== undefined && due !== undefined && Math.abs(row.startUtcMs - due) < 1000) return endUtcMs;
     expected = new Map();
     endUtcMs = predictEndUtcMs(start, context, { nowUtcMs, eachStep: ({ path }, startUtcMs) => expected.set(path, startUtcMs) });
     if (row !== undefined) expected.set(row.path, row.startUtcMs);

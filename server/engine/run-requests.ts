@@ -35,6 +35,16 @@ export class RunRequests {
     return this.ask({ type: 'withdraw-hold', at: this.run.now(), by }, 'hold-after-dwell-withdrawn');
   }
 
+  /** The run ends on a whole pair: with the one under way, or the last one after which it is over by `finishByUtcMs`. `by` empty: the night window asks. */
+  finishEarly(by: string, finishByUtcMs: number | null = null): Promise<Answer> {
+    return this.ask({ type: 'finish-early', at: this.run.now(), by, finishByUtcMs }, 'finish-asked');
+  }
+
+  /** The run goes on to the end of its protocol after all. */
+  withdrawFinish(by: string): Promise<Answer> {
+    return this.ask({ type: 'withdraw-finish', at: this.run.now(), by }, 'finish-withdrawn');
+  }
+
   async resume(by: string): Promise<Answer> {
     const { at, arm, lockedBy } = this.standing();
     if (this.run.mayNotWrite()) return withoutDatabase;

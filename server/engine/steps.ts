@@ -24,6 +24,7 @@ import { beginAwaiting } from './awaiting';
 import { cursorMoment, holdOfDwells, lookAtDwell } from './dwells';
 import type { Draft } from './draft';
 import { noteOrders } from './orders';
+import { heedFinishing } from './finishing';
 import { runProof } from './proofs';
 import { newRow, stationOf, toleranceDeg } from './rows';
 import type { ActiveStep, Motion, RunContext } from './run-context';
@@ -42,6 +43,7 @@ export function chooseAfter(draft: Draft, late: boolean): void {
   context.step = null;
   context.ahead = null;
   context.moveRetries = 0;
+  heedFinishing(context);
   for (;;) {
     const next = nextItem(draft, { cursor: context.cursor, moment: cursorMoment(draft) });
     if (next === null) {
@@ -333,6 +335,7 @@ export function sendAhead(draft: Draft): void {
   if (step === null) return;
   const endUtcMs = standingEndUtcMs(step);
   context.deadlineUtcMs = endUtcMs;
+  heedFinishing(context);
   if (endUtcMs - draft.nowUtcMs < LEAST_LEAD_MS || context.moveRetries > 0) return;
   const holds = context.holdAfterStep !== null || holdOfDwells(draft) !== null || armHasEnded(draft, endUtcMs);
   if ((holds && step.pause !== true) || !draft.controller.positionKnown) return;

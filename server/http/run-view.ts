@@ -1,7 +1,7 @@
 import type { RunStart } from '@/shared/archive/run-records';
 import type { LiveMessages, RunSummary, RunView } from '@/shared/contracts/runs';
 import type { WaitingView } from '@/shared/contracts/waiting';
-import { factsOf, plannedDwells, type RunFacts, type WaitingFacts } from '../engine/run-facts';
+import { factsOf, plannedRun, type RunFacts, type WaitingFacts } from '../engine/run-facts';
 import { restored } from '../engine/stored-snapshot';
 import { findRun, readSteps, type RunListRow, type RunRecord } from '../store/runs-read';
 import { isoOf, isoOrNull } from './maker';
@@ -65,6 +65,7 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
     dwellsDone: facts.dwellsDone,
     dwellsPlanned: facts.dwellsPlanned,
     holdAfterDwell: facts.holdAfterDwell,
+    finishing: facts.finishing === null ? null : finishingViewOf(facts.finishing),
     dwellsGood: facts.dwellsGood,
     waiting: facts.waiting === null ? null : waitingViewOf(facts.waiting),
     reversal: facts.reversal,
@@ -92,14 +93,20 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
 /** Rig and protocol went out with the first snapshot: with every change they would be nine tenths of all that is sent. */
 export function progressOf(view: RunView): LiveMessages['progress'] {
   const { state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt } = view;
-  const { dwellsGood, waiting, reversal } = view;
+  const { dwellsGood, waiting, reversal, finishing } = view;
   const { dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq } = view;
   return {
     ...{ state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt },
-    ...{ dwellsGood, waiting, reversal },
+    ...{ dwellsGood, waiting, reversal, finishing },
     ...{ dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq },
   };
 }
+
+const finishingViewOf = ({ by, askedUtcMs, finishByUtcMs, withdrawnBy }: NonNullable<RunFacts['finishing']>) => ({
+  ...{ by, withdrawnBy },
+  at: isoOf(askedUtcMs),
+  overBy: isoOrNull(finishByUtcMs),
+});
 
 const notDriven = { ok: false, why: 'The run is not driven by this server.' };
 
@@ -114,7 +121,7 @@ function waitingViewOf({ kind, text, givesUpUtcMs, otherwise, firstLookUtcMs, fo
 }
 
 async function factsOfStored(services: Services, run: RunRecord): Promise<RunFacts> {
-  const dwellsPlanned = plannedDwells(run.start, startUtcMsOf(run));
+  const planned = plannedRun(run.start, startUtcMsOf(run));
   const snapshot = restored(run.snapshot, run.chartVersion);
   if (snapshot !== null)
     return factsOf({
@@ -125,7 +132,7 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
       lockedBy: null,
       lastSeq: run.lastSeq,
       predictedEndUtcMs: run.predictedEndAt,
-      dwellsPlanned,
+      planned,
     });
   const steps = await readSteps(services.database.db, { labId: run.labId, runId: run.id });
   return {
@@ -139,8 +146,10 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
     current: steps.find((step) => step.outcome === null) ?? null,
     deadlineUtcMs: null,
     dwellsDone: steps.filter((step) => step.kind === 'dwell' && step.outcome === 'done').length,
-    dwellsPlanned,
+    dwellsPlanned: planned.dwells,
+    plannedEndUtcMs: planned.endUtcMs,
     holdAfterDwell: false,
+    finishing: null,
     dwellsGood: steps.filter((step) => step.kind === 'dwell' && step.outcome === 'done' && step.good !== false).length,
     dwellsUnpaired: 0,
     waiting: null,

@@ -186,7 +186,8 @@ const kinds = {
     title: 'Few good dwells',
     cause: 'The run has passed half of its dwells, and fewer than half of those that are done are good.',
     consequence: 'The night says less than was planned. The run goes on, and makes up what its protocol allows.',
-    answer: 'Read in the step log why they are not good. Where the night is not worth going on, hold after a whole pair, then stop.',
+    answer:
+      'Read in the step log why they are not good. Where the night is not worth going on, end it on a whole pair on the page of the run.',
     followsFrom: ['deflection-silent', 'residual-high', 'channel-silent', 'channel-level', 'channel-slope'],
   },
   'channel-level': {
@@ -217,7 +218,8 @@ const kinds = {
     title: 'Run will pass the end of the night window',
     cause: 'Holds or bad dwells have moved the predicted finish beyond the hours of the room.',
     consequence: 'Cleaners, guards or the day’s work would meet a running rig.',
-    answer: 'Hold it after the dwell that makes a pair whole and stop it then: what was measured counts. Or let the lab know.',
+    answer:
+      'A run that was planned to end within the window ends on a whole pair before it, by itself: what was measured counts. Where the room is free for longer, take that back on the page of the run.',
   },
   'not-armed': {
     ...usual,

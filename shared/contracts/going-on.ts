@@ -17,6 +17,14 @@ export const withdrawHold = defineRoute({
   }),
   body: z.strictObject({ tappedAt: motionFields.tappedAt }),
 });
+export const withdrawFinish = defineRoute({
+  ...intervention('withdraw-finish', {
+    name: 'withdrawFinish',
+    summary: 'Take back that the run ends early: it goes on to the end of its protocol',
+    access: 'run.resume',
+  }),
+  body: z.strictObject({ tappedAt: motionFields.tappedAt }),
+});
 export const skipStep = defineRoute({
   ...intervention('skip', {
     name: 'skipStep',

@@ -12,6 +12,17 @@ export const interventionSchema = z.strictObject({
   confirmedAt: instantSchema.nullable(),
 });
 
+/** That a run ends before the end of its protocol, on a whole pair. */
+export const finishingSchema = z.strictObject({
+  /** Who asked; empty: the night window of the room. */
+  by: z.string(),
+  at: instantSchema,
+  /** The run is to be over by then; null: with the pair under way. */
+  overBy: instantSchema.nullable(),
+  /** Who took it back; null: it is in force. */
+  withdrawnBy: z.string().nullable(),
+});
+
 export const stepRowViewSchema = z.strictObject({
   seq: z.number().int(),
   path: z.string(),

@@ -4,7 +4,7 @@ import { rigDocumentSchema } from '../rig/document';
 import { idSchema, instantSchema, pageOf, pageQuerySchema } from './common';
 import { positionViewSchema } from './position';
 import { defineRoute } from './route';
-import { chainedEventSchema, interventionSchema, stepRowViewSchema } from './run-rows';
+import { chainedEventSchema, finishingSchema, interventionSchema, stepRowViewSchema } from './run-rows';
 import { reversalSoFarSchema, waitingSchema } from './waiting';
 
 export type { StepRowView } from './run-rows';
@@ -41,6 +41,7 @@ export const runViewSchema = runSummarySchema.extend({
   dwellsDone: z.number().int(),
   dwellsPlanned: z.number().int(),
   holdAfterDwell: z.boolean(),
+  finishing: finishingSchema.nullable(),
   /** Of the dwells done, those that count. */
   dwellsGood: z.number().int(),
   /** What the present step waits for; null where it ends by plan. */
@@ -75,6 +76,7 @@ const runProgressSchema = runViewSchema.pick({
   dwellsDone: true,
   dwellsPlanned: true,
   holdAfterDwell: true,
+  finishing: true,
   dwellsGood: true,
   waiting: true,
   reversal: true,
@@ -223,6 +225,11 @@ export const holdRun = intervention('hold', {
 export const holdAfterDwell = intervention('hold-after-dwell', {
   name: 'holdAfterDwell',
   summary: 'Hold when the present dwell has ended',
+  access: 'run.hold',
+});
+export const finishEarly = intervention('finish-early', {
+  name: 'finishEarly',
+  summary: 'End the run on a whole pair: the pass under way is made whole, no other begins, and what follows the repeats is carried out',
   access: 'run.hold',
 });
 export const stopRun = intervention('stop', { name: 'stopRun', summary: 'Stop: decelerate and end the run', access: 'run.stop' });

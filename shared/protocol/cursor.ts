@@ -1,4 +1,4 @@
-import type { RepeatStep } from './document';
+import type { RepeatStep, Step } from './document';
 import { nextOccurrenceUtcMs } from './durations';
 import { numberAt, orderedPass, type OrderedSteps, type PassOrder } from './shuffle';
 import { type LeafStep, type CursorPlan, stateAfterIfPossible } from './step-effect';
@@ -30,6 +30,11 @@ export interface CursorState {
   executed: number;
   /** The swing to the station of `atEnd` has been given out. */
   atEndGiven: boolean;
+  /**
+   * The run is to be over by then, UTC ms: of a repeat that moves the sources no pass begins after which it would not be. 0: none begins at all. A pair
+   * lies within one pass, so the run ends on a whole one. Absent: it goes on to the end of its protocol.
+   */
+  finishByUtcMs?: number;
   /** What of a shaped swing or a kick is still to come, as worked out when it began. */
   parts?: PlannedItem[];
 }
@@ -83,7 +88,8 @@ export function advanceCursor(plan: InnerPlan, cursor: CursorState, moment: Curs
       const repeat = outer.steps[place] as RepeatStep;
       Object.assign(frame, { good: (frame.good ?? frame.pass - 1) + (frame.spoilt === true ? 0 : 1), spoilt: false });
       const next = passAt(outer, place, { repeat, pass: frame.pass + 1, plan });
-      if (anotherPass(repeat, frame, { plan, moment, next })) {
+      const again = { ...cursor, frames: [...frames.slice(0, -1), { ...frame, next: 0, pass: frame.pass + 1 }] };
+      if (anotherPass(repeat, frame, { plan, moment, next, again })) {
         Object.assign(frame, { next: 0, pass: frame.pass + 1 });
         drawn.push(...orderOf(next));
       } else {
@@ -93,7 +99,8 @@ export function advanceCursor(plan: InnerPlan, cursor: CursorState, moment: Curs
     } else if (step.kind === 'repeat') {
       const inner: CursorFrame = { next: 0, pass: 0, deadlineUtcMs: deadlineOf(step, plan, moment) };
       const next = passAt(list, frame.next, { repeat: step, pass: 1, plan });
-      if (step.steps.length > 0 && anotherPass(step, inner, { plan, moment, next })) {
+      const again = { ...cursor, frames: [...frames, { ...inner, pass: 1 }] };
+      if (step.steps.length > 0 && anotherPass(step, inner, { plan, moment, next, again })) {
         frames.push({ ...inner, pass: 1 });
         drawn.push(...orderOf(next));
       } else frame.next += 1;
@@ -179,9 +186,12 @@ interface Passing {
   moment: CursorMoment;
   /** The pass in question. */
   next: List;
+  /** The cursor where it begins. */
+  again: CursorState;
 }
 
 function anotherPass(repeat: RepeatStep, frame: CursorFrame, context: Passing): boolean {
+  if (movesSources(repeat) && !finishesInTime(context)) return false;
   if (repeat.atMost !== undefined && frame.pass >= repeat.atMost) return false;
   if (frame.deadlineUtcMs !== null) return passEndsBy(frame.deadlineUtcMs, context);
   if (repeat.until !== undefined && 'relativeStatisticalU' in repeat.until)
@@ -201,6 +211,26 @@ function isReached(wanted: number, { plan, moment }: { plan: CursorPlan; moment:
 
 /** An instant taken from the controller's stamps may be off the plan by some µs: so near to the deadline counts as on it, ms. */
 const roundingMs = 0.5;
+
+/** Whether a step, or one within it, moves the sources from station to station. */
+const movesSources = (step: Step): boolean =>
+  step.kind === 'repeat' ? step.steps.some(movesSources) : step.kind === 'swing' || step.kind === 'kick' || step.kind === 'rotate';
+
+/** Whether the whole run would be over in time, by plan, if this pass were made and none after it. */
+function finishesInTime({ plan, moment, again }: Passing): boolean {
+  const { finishByUtcMs } = again;
+  if (finishByUtcMs === undefined) return true;
+  if (finishByUtcMs === 0) return false;
+  let state = { ...moment, swingStartUtcMs: null as number | null };
+  let cursor: CursorState = { ...again, executed: 0, finishByUtcMs: 0 };
+  while (state.utcMs <= finishByUtcMs + roundingMs) {
+    const next = advanceCursor(plan, cursor, state);
+    if (next.item === null) return true;
+    cursor = next.cursor;
+    state = stateAfterIfPossible(next.item, plan, state);
+  }
+  return false;
+}
 
 /** Whether a pass of the repeat that began at the moment would end, by plan, no later than the deadline. */
 function passEndsBy(deadlineUtcMs: number, { plan, moment, next: pass }: Passing): boolean {

@@ -1,4 +1,5 @@
 import { formatClock, formatDay } from '../lib/format-time';
+import { nextOccurrenceUtcMs } from '../protocol/durations';
 import type { RoomHours } from './plan';
 
 export interface Stay {
@@ -21,6 +22,10 @@ export function againstRoom(hours: RoomHours, stay: Stay, timeZone: string): str
   const clock = (utcMs: number) => formatClock(utcMs, { timeZone });
   return `It would take from ${clock(stay.startUtcMs)} to ${clock(stay.endUtcMs)}; the night window of the room is ${nightWindow.from} to ${nightWindow.until}.`;
 }
+
+/** When the window ends in which a stay begins, UTC ms. */
+export const endOfWindow = ({ until }: { until: string }, { startUtcMs, timeZone }: { startUtcMs: number; timeZone: string }): number =>
+  nextOccurrenceUtcMs({ localTime: until, timeZone, utcMs: startUtcMs });
 
 /** By the clocks on the wall: it starts within the window, and ends in the same night before the window does. */
 function withinWindow({ from, until }: { from: string; until: string }, { startUtcMs, endUtcMs }: Stay, timeZone: string): boolean {

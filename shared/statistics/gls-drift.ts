@@ -1,22 +1,24 @@
 import type { DifferenceEstimate, SidedValue } from './drift';
 import { leastSquares } from './least-squares';
 import { at, cholesky, SingularMatrixError, type Matrix } from './symmetric';
+import { walkRatios } from './wandering-zero';
 
 /**
- * Near minus far by generalised least squares: the zero walks at random between the dwells, each of which has white noise of its own.
- * The share of the walk is that of the greatest restricted likelihood.
+ * Near minus far by generalised least squares: the zero drifts steadily and walks at random between the dwells, each of which has white noise of its
+ * own. The share of the walk is that of the greatest restricted likelihood.
  */
 
-/** Variance of the walk from one dwell to the next over that of a dwell, tried on a grid of half octaves. */
-const ratios = [0, ...Array.from({ length: 41 }, (_, k) => 2 ** (k / 2 - 10))];
+/** With fewer dwells nothing would be left beside difference, zero and drift: the zero is taken to walk only. */
+const enoughForDrift = 4;
 
 /** @throws Error when one side is missing. */
 export function walkDifference(series: readonly SidedValue[]): DifferenceEstimate {
   if (new Set(series.map(({ side }) => side)).size < 2) throw new Error('a difference needs values on both sides');
-  const fits = ratios.map((ratio) => walkFit(series, ratio));
+  const steady = series.length >= enoughForDrift;
+  const fits = walkRatios.map((ratio) => walkFit(series, ratio, steady));
   const best = fits.reduce((a, b) => (b.criterion < a.criterion ? b : a));
   const { estimate } = best;
-  const degreesOfFreedom = series.length - 3;
+  const degreesOfFreedom = series.length - (steady ? 4 : 3);
   return degreesOfFreedom < 1 ? { ...estimate, u: null, degreesOfFreedom: null } : { ...estimate, degreesOfFreedom };
 }
 
@@ -28,10 +30,11 @@ interface WalkFit {
   unitVariance: number;
 }
 
-/** With the walk's variance per mean interval given, in that of a dwell. */
-export function walkFit(series: readonly SidedValue[], ratio: number): WalkFit {
+/** With the walk's variance per mean interval given, in that of a dwell; `steady`: a steady drift is taken off too. */
+export function walkFit(series: readonly SidedValue[], ratio: number, steady = false): WalkFit {
   const lower = cholesky(covarianceOf(series, ratio));
-  const columns = [series.map(({ side }) => side), series.map(() => 1)].map((column) => forward(lower, column));
+  const times = steady ? [timesOf(series)] : [];
+  const columns = [series.map(({ side }) => side), series.map(() => 1), ...times].map((column) => forward(lower, column));
   const fit = leastSquares(
     columns,
     forward(
@@ -39,18 +42,32 @@ export function walkFit(series: readonly SidedValue[], ratio: number): WalkFit {
       series.map(({ value }) => value),
     ),
   );
-  const degreesOfFreedom = series.length - 2;
+  const degreesOfFreedom = series.length - columns.length;
   const variance = degreesOfFreedom > 0 ? fit.ssr / degreesOfFreedom : NaN;
-  const weights = backward(lower, columns, [2 * at(fit.unitCovariance, 0, 0), 2 * at(fit.unitCovariance, 0, 1)]);
+  const weights = backward(
+    lower,
+    columns,
+    columns.map((_, j) => 2 * at(fit.unitCovariance, 0, j)),
+  );
   const unitVariance = 4 * at(fit.unitCovariance, 0, 0);
-  const determinant = at(fit.unitCovariance, 0, 0) * at(fit.unitCovariance, 1, 1) - at(fit.unitCovariance, 0, 1) ** 2;
-  const logDeterminant = 2 * lower.reduce((sum, row, i) => sum + Math.log(row[i] as number), 0);
+  const logDeterminant = 2 * sumOfLogs(lower);
   return {
     estimate: { value: 2 * (fit.coefficients[0] as number), weights, u: Math.sqrt(variance * unitVariance), degreesOfFreedom },
     criterion:
-      degreesOfFreedom > 0 ? degreesOfFreedom * Math.log(fit.ssr + Number.MIN_VALUE) + logDeterminant - Math.log(determinant) : ratio,
+      degreesOfFreedom > 0
+        ? degreesOfFreedom * Math.log(fit.ssr + Number.MIN_VALUE) + logDeterminant - logDeterminantOf(fit.unitCovariance)
+        : ratio,
     unitVariance,
   };
+}
+
+const sumOfLogs = (lower: Matrix) => lower.reduce((sum, row, i) => sum + Math.log(row[i] as number), 0);
+const logDeterminantOf = (matrix: Matrix) => 2 * sumOfLogs(cholesky(matrix));
+
+/** Of the mid-dwells, from −1 to 1. */
+function timesOf(series: readonly SidedValue[]): number[] {
+  const [first, last] = [series[0]?.timeS ?? 0, series.at(-1)?.timeS ?? 0];
+  return series.map(({ timeS }) => (2 * timeS - first - last) / (last - first || 1));
 }
 
 function covarianceOf(series: readonly SidedValue[], ratio: number): Matrix {

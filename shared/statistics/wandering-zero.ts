@@ -7,7 +7,7 @@ import type { SidedValue } from './drift';
  */
 
 /** Variance of the walk over the mean interval over that of a dwell's own noise, tried on a grid of half octaves. */
-const ratios = [0, ...Array.from({ length: 41 }, (_, k) => 2 ** (k / 2 - 10))];
+export const walkRatios = [0, ...Array.from({ length: 41 }, (_, k) => 2 ** (k / 2 - 10))];
 
 /** From so many dwells on they tell walk and noise apart; with fewer the walk is guessed too often where there is none. */
 export const enoughForWalk = 24;
@@ -24,7 +24,7 @@ export interface WalkScatter {
 export function walkScatter(series: readonly SidedValue[], weights: readonly number[]): WalkScatter | null {
   if (series.length < enoughForWalk) return null;
   const steps = stepsOf(series);
-  const fits = ratios.map((ratio) => fitOf(steps, ratio));
+  const fits = walkRatios.map((ratio) => fitOf(steps, ratio));
   const best = fits.reduce((a, b) => (b.criterion < a.criterion ? b : a));
   if (!Number.isFinite(best.criterion)) return null;
   const shares = sharesOf(weights);

@@ -180,6 +180,17 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     expect((await viewOf(runId)).holdAfterDwell).toBe(false);
   });
 
+  chapter('an end after this pair shows when the run is over, and is taken back', async () => {
+    const planned = (await viewOf(runId)).predictedEndAt ?? '';
+    await hand.taps('finish-early');
+    await hand.reads('finish-pending', /The run ends with the pair under way, as Ilse Marrowby asked.*It is over at about \d\d:\d\d/);
+    await hand.shoots('finish-pending');
+    expect(Date.parse((await viewOf(runId)).predictedEndAt ?? '')).toBeLessThan(Date.parse(planned) - 600_000);
+    await hand.taps('withdraw-finish');
+    await hand.at('finish-pending').waitFor({ state: 'detached' });
+    expect((await viewOf(runId)).predictedEndAt).toBe(planned);
+  });
+
   chapter('hold after this dwell cuts nothing short', async () => {
     await hand.taps('hold-after-dwell');
     await hand.sees('Will hold when this dwell has ended. Nothing is cut short.');

@@ -80,13 +80,14 @@ test.each(moments)('stop at %s s: at rest within the ramp, and nothing moves aga
   await expectStandstill(night, 1000);
 });
 
-type Tap = { kind: 'pass'; seconds: number } | { kind: 'hold' | 'resume' | 'hold-after-dwell' | 'drop' | 'garbage' };
+type Tap =
+  { kind: 'pass'; seconds: number } | { kind: 'hold' | 'resume' | 'hold-after-dwell' | 'end-early' | 'go-on' | 'drop' | 'garbage' };
 const tap: fc.Arbitrary<Tap> = fc.oneof(
   { weight: 3, arbitrary: fc.record({ kind: fc.constant('pass' as const), seconds: fc.double({ min: 0.001, max: 45, noNaN: true }) }) },
   {
     weight: 3,
     arbitrary: fc.record({
-      kind: fc.constantFrom('hold' as const, 'resume' as const, 'hold-after-dwell' as const, 'drop' as const, 'garbage' as const),
+      kind: fc.constantFrom(...(['hold', 'resume', 'hold-after-dwell', 'end-early', 'go-on', 'drop', 'garbage'] as const)),
     }),
   },
 );
@@ -97,6 +98,8 @@ async function doTap(night: Night, what: Tap): Promise<void> {
   if (what.kind === 'hold') return void driver.hold('Ben');
   if (what.kind === 'resume') return void driver.resume('Ben');
   if (what.kind === 'hold-after-dwell') return void driver.holdAfterDwell('Ben');
+  if (what.kind === 'end-early') return void driver.requests.finishEarly('Cleo');
+  if (what.kind === 'go-on') return void driver.requests.withdrawFinish('Cleo');
   if (what.kind === 'drop') return controller.dropLine(30_000);
   controller.garbage(1000);
 }

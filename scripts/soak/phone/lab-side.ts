@@ -75,7 +75,7 @@ export class LabSide {
       endedAt: over ? iso(this.stoodStillAtMs ?? 0) : null,
       predictedEndAt: iso(this.startedAtMs + 3_600_000),
       ...{ current: null, deadlineAt: null, dwellsDone: 0, dwellsGood: 0, dwellsPlanned: 1, position: null },
-      ...{ holdAfterDwell: false, waiting: null, reversal: null, intervention: this.intervention },
+      ...{ holdAfterDwell: false, finishing: null, waiting: null, reversal: null, intervention: this.intervention },
       mayResume: { ok: this.state === 'held', why: '' },
       maySkip: { ok: false, why: '', seq: null },
       lastSeq: this.events.length,

@@ -144,6 +144,13 @@ const haltRoutes = [
     return accepted(services, params.runId, answer);
   }),
 
+  mount(contracts.finishEarly, async (context) => {
+    const { params, me, membership, services } = context;
+    const answer = await (await driverOf(services, membership.labId, params.runId)).requests.finishEarly(me.name);
+    if (answer.ok) auditLater(context, 'run.finish-asked', { runId: params.runId });
+    return accepted(services, params.runId, answer);
+  }),
+
   mount(contracts.stopRun, async (context) => {
     const { params, me, membership, services } = context;
     const found = services.activeRuns.find(membership.labId, params.runId);
@@ -165,6 +172,15 @@ const actRoutes = [
     assertFreshTap(body.tappedAt, services.clock.utcMs(), 'withdraw the hold');
     const answer = await driver.requests.withdrawHold(me.name);
     if (answer.ok) auditLater(context, 'run.hold-withdrawn', { runId: params.runId });
+    return accepted(services, params.runId, answer);
+  }),
+
+  mount(goingOn.withdrawFinish, async (context) => {
+    const { params, body, me, membership, services } = context;
+    const driver = await driverOf(services, membership.labId, params.runId);
+    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'take back the end');
+    const answer = await driver.requests.withdrawFinish(me.name);
+    if (answer.ok) auditLater(context, 'run.finish-withdrawn', { runId: params.runId });
     return accepted(services, params.runId, answer);
   }),
 

@@ -12,7 +12,8 @@ import { allRigs, type RigRecord } from '../../store/rigs';
 import { channelsOfRun } from '../../store/runs-read';
 import { lastSampleUtcMs } from '../../store/sample-summaries';
 import type { Services } from '../services';
-import { excursionCondition, lateCondition, limitConditions } from './channel-conditions';
+import { excursionCondition, limitConditions } from './channel-conditions';
+import { heedNightWindow } from './late-finish';
 import { OutageCall } from './outage-call';
 import { conditionsOf, isSlow, isWatched, runNowOf, type Condition } from './rig-conditions';
 import { delayOf, isNews, keyOf, together } from './told-conditions';
@@ -55,7 +56,6 @@ export class AlarmWatch {
   private cancel: Cancel = () => undefined;
   private stopped = false;
   private last: Promise<unknown> = Promise.resolve();
-
   private readonly outage: OutageCall;
 
   constructor(private readonly parts: WatchParts) {
@@ -177,7 +177,7 @@ export class AlarmWatch {
       const facts = driver.facts();
       const active = services.activeRuns.find(rig.labId, facts.runId);
       const { timeZone = 'UTC' } = active?.run.start ?? {};
-      slow.push(...(await lateCondition(db, facts, { labId: rig.labId, rigId: rig.id, timeZone })));
+      slow.push(...(await heedNightWindow(db, driver, { labId: rig.labId, rigId: rig.id, timeZone })));
       const station = services.stations.get(rig.id);
       const channel = station === null ? null : await this.deflectionOf(rig.labId, facts.runId, station);
       if (channel !== null) slow.push(...(await excursionCondition(services.database, rig, { channel, utcMs, runId: facts.runId })));

@@ -3,18 +3,14 @@ import { NEAR_LIMIT, swingRoomRad } from '@/shared/conditions/dwell-verdict';
 import { UnusableArchive } from '@/shared/archive/unusable-archive';
 import { scaleOf, toRad, type ChannelScale } from '@/shared/evaluation/channel-scale';
 import type { RigDocument } from '@/shared/rig/document';
-import type { RoomHours } from '@/shared/schedule/plan';
-import { againstRoom } from '@/shared/schedule/room';
 import type { LimitRecord } from '../../store/channel-limits';
 import { extremesAbout, slopePerHOf } from '../../store/channel-now';
-import type { Connection, Database } from '../../store/database';
+import type { Connection } from '../../store/database';
 import type { RigRecord } from '../../store/rigs';
 import { lastSampleOf } from '../../store/sample-summaries';
-import { hoursOfRoom } from '../../store/schedules';
-import type { RunFacts } from '../../engine/run-facts';
 import type { Condition } from './rig-conditions';
 
-/** Conditions that need a look into the database: limits of channels, the pendulum's excursion, the hours of the room. */
+/** Conditions that need a look into the database: limits of channels, the pendulum's excursion. */
 
 export const subjectOfLimit = (limitId: string) => `limit ${limitId}`;
 const codes = { level: 'channel-level', slope: 'channel-slope', silence: 'channel-silent' } as const;
@@ -42,26 +38,6 @@ export async function limitConditions(
     found.push({ code, subject, words, runId: null, rings: limit.rings, onDelayS: 'forS' in limit ? limit.forS : 0 });
   }
   return found;
-}
-
-/** Whether the run that began within the night window will pass its end. */
-export async function lateCondition(
-  db: Database,
-  facts: RunFacts,
-  { timeZone, ...rig }: { labId: string; rigId: string; timeZone: string },
-): Promise<Condition[]> {
-  const words = lateWords(facts, { hours: await hoursOfRoom(db, rig), timeZone });
-  return words === null ? [] : [{ code: 'late-finish', subject: '', words, runId: facts.runId }];
-}
-
-/** Where a run begins within the hours of its room and is to end outside of them: in words; else null. */
-export function lateWords(
-  { startedAtUtcMs, predictedEndUtcMs }: Pick<RunFacts, 'startedAtUtcMs' | 'predictedEndUtcMs'>,
-  { hours, timeZone }: { hours: RoomHours; timeZone: string },
-): string | null {
-  if (startedAtUtcMs === null || predictedEndUtcMs === null) return null;
-  const beginning = againstRoom(hours, { startUtcMs: startedAtUtcMs, endUtcMs: startedAtUtcMs + 1 }, timeZone);
-  return beginning === null ? againstRoom(hours, { startUtcMs: startedAtUtcMs, endUtcMs: predictedEndUtcMs }, timeZone) : null;
 }
 
 /** The pendulum beyond 90 % of its clearance or of the range of its readout, about its mean over the last four periods. */

@@ -40,6 +40,7 @@ describe('what arrives', () => {
       dwellsGood,
       waiting,
       reversal,
+      finishing,
     } = viewAt(nowUtcMs);
     const same = {
       startedAt,
@@ -56,6 +57,7 @@ describe('what arrives', () => {
       dwellsGood,
       waiting,
       reversal,
+      finishing,
     };
     const [, row] = rowsAt(nowUtcMs);
     const progress = (lastSeq: number, change: Partial<{ state: 'held'; reason: string }>): LiveMessage => ({

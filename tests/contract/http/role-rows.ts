@@ -129,6 +129,8 @@ export const rows: Readonly<Record<string, Row>> = {
   getRun: { params: run, allowed: 200 },
   holdRun: { params: run, body: () => ({}), allowed: 409 },
   holdAfterDwell: { params: run, body: () => ({}), allowed: 409 },
+  finishEarly: { params: run, body: () => ({}), allowed: 409 },
+  withdrawFinish: { params: run, body: () => ({ tappedAt: tapped.tappedAt }), allowed: 409 },
   withdrawHold: { params: run, body: () => ({ tappedAt: tapped.tappedAt }), allowed: 409 },
   resumeRun: { params: run, body: () => tapped, allowed: 409 },
   skipStep: { params: run, body: () => ({ ...tapped, seq: 1 }), allowed: 409 },

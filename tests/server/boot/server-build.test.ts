@@ -25,7 +25,10 @@ function ensured(files = ['main.ts']): string {
   const module = pathToFileURL(join(root, 'scripts', 'lib', 'server-build.mjs')).href;
   const setting = JSON.stringify({ base, kept: join(base, 'kept'), files });
   const program = `import { ensureServerBuild } from ${JSON.stringify(module)}; console.log(await ensureServerBuild(${setting}));`;
-  return execFileSync(process.execPath, ['--input-type=module', '-e', program], { encoding: 'utf8', stdio: ['ignore', 'pipe', 'pipe'] }).trim();
+  return execFileSync(process.execPath, ['--input-type=module', '-e', program], {
+    encoding: 'utf8',
+    stdio: ['ignore', 'pipe', 'pipe'],
+  }).trim();
 }
 
 const run = (folder: string) => execFileSync(process.execPath, [join(folder, 'main.js')], { encoding: 'utf8' }).trim();

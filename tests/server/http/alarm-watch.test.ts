@@ -24,7 +24,14 @@ const station = {
   channel: { id: demoIds.channel, name: 'deflection', unit: 'rad' },
 };
 const facts = () => ({
-  ...{ runId, startedAtUtcMs: Date.UTC(2031, 1, 14, 20), predictedEndUtcMs: null, loud: null },
+  ...{
+    runId,
+    startedAtUtcMs: Date.UTC(2031, 1, 14, 20),
+    predictedEndUtcMs: null,
+    plannedEndUtcMs: Date.UTC(2031, 1, 15, 4),
+    finishing: null,
+    loud: null,
+  },
   ...{ dwellsDone: 0, dwellsGood: 0, dwellsUnpaired: 0, dwellsPlanned: 32 },
   ...run,
 });

@@ -1,7 +1,8 @@
 import { readFileSync } from 'node:fs';
 import { join } from 'node:path';
 import type { RunFacts } from '@/server/engine/run-facts';
-import { excursionWords, lateWords } from '@/server/http/work/channel-conditions';
+import { excursionWords } from '@/server/http/work/channel-conditions';
+import { finishByOf, lateWords } from '@/server/http/work/late-finish';
 import { conditionsOf, runNowOf, type RigNow } from '@/server/http/work/rig-conditions';
 import { alarmCodes, alarmKinds, type AlarmCode, type Ringing } from '@/shared/alarms/catalog';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
@@ -149,6 +150,25 @@ test('a run that began within the hours of its room and will end outside of them
   expect(at('2031-02-14T21:00:00Z', '2031-02-15T06:00:00Z')).toContain('the night window of the room is 21:00 to 06:30');
   expect(at('2031-02-14T12:00:00Z', '2031-02-15T06:00:00Z')).toBeNull();
   expect(lateWords({ startedAtUtcMs: 0, predictedEndUtcMs: null }, room)).toBeNull();
+});
+
+test('a run is to be over by the end of its night window only where it was planned to be, and nobody has decided otherwise', () => {
+  const room = { hours: { nightWindow: { from: '21:00', until: '06:30' }, blackouts: [] }, timeZone: 'Europe/Zurich' };
+  const began = { startedAtUtcMs: Date.parse('2031-02-14T21:00:00Z'), finishing: null };
+  const by = (planned: string, predicted: string | null, more = {}) =>
+    finishByOf(
+      { ...began, plannedEndUtcMs: Date.parse(planned), predictedEndUtcMs: predicted === null ? null : Date.parse(predicted), ...more },
+      room,
+    );
+  expect(by('2031-02-15T05:00:00Z', '2031-02-15T05:20:00Z')).toBeNull();
+  expect(by('2031-02-15T05:00:00Z', '2031-02-15T06:00:00Z')).toBe(Date.parse('2031-02-15T05:30:00Z'));
+  expect(by('2031-02-15T05:40:00Z', '2031-02-15T06:00:00Z')).toBeNull();
+  expect(by('2031-02-15T05:00:00Z', null)).toBeNull();
+  const withdrawn = { by: '', askedUtcMs: 0, finishByUtcMs: 0, withdrawnBy: 'Ben' };
+  expect(by('2031-02-15T05:00:00Z', '2031-02-15T06:00:00Z', { finishing: withdrawn })).toBeNull();
+  // Over the night on which the clocks go forward: 06:30 comes an hour sooner.
+  const march = { startedAtUtcMs: Date.parse('2031-03-29T21:00:00Z') };
+  expect(by('2031-03-30T04:00:00Z', '2031-03-30T05:00:00Z', march)).toBe(Date.parse('2031-03-30T04:30:00Z'));
 });
 
 test('the list of alarms that users read names each, and whom it tells', () => {

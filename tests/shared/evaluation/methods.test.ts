@@ -125,6 +125,11 @@ test('generalised least squares against a wandering zero: the cost of 48 dwells 
   const { weights } = walkFit(series, 1).estimate;
   expect(weights.reduce((sum, w) => sum + w, 0)).toBeCloseTo(0, 12);
   expect(weights.reduce((sum, w, k) => sum + w * (series[k]?.side ?? 0), 0)).toBeCloseTo(2, 12);
+  // Beside a steady drift neither the zero nor the drift reaches the difference; sides by turns and time go together by 3/(n² − 1).
+  const steady = walkFit(series, 1, true).estimate.weights;
+  expect(steady.reduce((sum, w, k) => sum + w * (series[k]?.timeS ?? 0), 0) / 48_000).toBeCloseTo(0, 12);
+  expect(steady.reduce((sum, w, k) => sum + w * (series[k]?.side ?? 0), 0)).toBeCloseTo(2, 12);
+  expect((48 * walkFit(series, 0, true).unitVariance) / 4).toBeCloseTo(1 / (1 - 3 / (48 ** 2 - 1)), 12);
 });
 
 describe('a still night', () => {

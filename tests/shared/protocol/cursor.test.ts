@@ -149,3 +149,58 @@ test('repeats that hold nothing are passed over, and do not turn for ever', () =
   expect(run({ steps: [empty, mark('a')] }).map(({ path }) => path)).toEqual(['2.mark']);
   expect(() => run({ steps: [{ kind: 'repeat', times: 1_000_000_000, steps: [empty] }] })).toThrow(RangeError);
 });
+
+describe('a run that is to be over by a time', () => {
+  const pair: Step[] = [
+    { kind: 'swing', to: 'near' },
+    { kind: 'dwell', for_s: 600 },
+    { kind: 'swing', to: 'far' },
+    { kind: 'dwell', for_s: 600 },
+  ];
+  const isDwell = ({ step }: PlannedItem) => step.kind === 'dwell';
+
+  /** What is executed when the end is asked for after so many steps. */
+  function cutAfter(steps: Step[], count: number, finishByUtcMs = 0): PlannedItem[] {
+    const items: PlannedItem[] = [];
+    let cursor = beginCursor();
+    for (;;) {
+      const state: CursorState = items.length >= count ? { ...cursor, finishByUtcMs } : cursor;
+      const next = advanceCursor(planOf({ steps }), state, { utcMs: items.filter(isDwell).length * 600_000, angleDeg: 0 });
+      if (next.item === null) return items;
+      items.push(next.item);
+      cursor = next.cursor;
+    }
+  }
+
+  test('makes whole pairs only, wherever it is asked, also where pairs are repeated in repeats', () => {
+    const steps: Step[] = [
+      { kind: 'home' },
+      { kind: 'repeat', times: 2, steps: [{ kind: 'repeat', times: 3, steps: pair }, mark('six')] },
+      mark('end'),
+    ];
+    for (let count = 0; count <= 1 + 2 * (3 * 4 + 1) + 1; count += 1) {
+      const items = cutAfter(steps, count);
+      const stations = items.flatMap(({ step }) => (step.kind === 'swing' ? [step.to] : []));
+      expect(stations.join(' ')).toMatch(/^(near far ?)*$/);
+      expect(items.filter(isDwell).length).toBe(stations.length);
+      expect(items.at(-1)?.path).toBe('3.mark');
+    }
+  });
+
+  test('a repeat that only stands still is a part of its pair and is never cut', () => {
+    const twice: Step[] = pair.flatMap((step): Step[] => (step.kind === 'dwell' ? [{ kind: 'repeat', times: 2, steps: [step] }] : [step]));
+    expect(cutAfter([{ kind: 'repeat', times: 5, steps: twice }], 2).filter(isDwell).length).toBe(4);
+  });
+
+  test('counts what comes after the pairs: a pass begins only if all of it still ends in time', () => {
+    const steps: Step[] = [
+      { kind: 'repeat', times: 50, steps: pair },
+      { kind: 'settle', for_s: 3600 },
+    ];
+    // By the plan a move takes some seconds more; the moments above count dwells alone.
+    const made = (byS: number) => cutAfter(steps, 0, 1000 * byS).filter(isDwell).length / 2;
+    expect(made(3 * 1200 + 3600 + 120)).toBe(3);
+    expect(made(3 * 1200 + 3600 - 120)).toBe(2);
+    expect(made(1200)).toBe(0);
+  });
+});

@@ -1,0 +1,5 @@
+import { CompareRunsScreen } from '@/components/shell/lazy-screens';
+
+export default function CompareRuns() {
+  return <CompareRunsScreen />;
+}

@@ -1,0 +1,69 @@
+import type { Draft } from './draft';
+import { predictEndUtcMs } from './predicted-end';
+import type { RunContext } from './run-context';
+
+/** A run that ends before the end of its protocol: the pass under way is made whole, no other begins, and what follows the repeats is carried out. */
+
+const iso = (utcMs: number) => new Date(utcMs).toISOString();
+
+/** Who asked, as the log and the screens say it. */
+export const askedBy = (by: string): string => (by === '' ? 'the night window' : by);
+
+/** In force now. */
+export const isFinishing = ({ finishing }: Pick<RunContext, 'finishing'>): boolean =>
+  finishing !== undefined && finishing.withdrawnBy === null;
+
+/** Tells the cursor; not while a move waits in the controller, which is the next one of the plan under which it was sent. */
+export function heedFinishing(context: Pick<RunContext, 'finishing' | 'cursor' | 'ahead'>): void {
+  const { finishing, cursor, ahead } = context;
+  if (ahead !== null) return;
+  if (finishing !== undefined && finishing.withdrawnBy === null) cursor.finishByUtcMs = finishing.finishByUtcMs ?? 0;
+  else delete cursor.finishByUtcMs;
+}
+
+/** Why it is not to end early; null where it is. */
+export function finishRefusal(draft: Draft): string | null {
+  const { context, start, nowUtcMs } = draft;
+  const { by, finishByUtcMs } = draft.told('finish-early');
+  const { finishing } = context;
+  if (finishing !== undefined && finishing.withdrawnBy === null && finishing.finishByUtcMs === finishByUtcMs)
+    return `The run is to end early already: ${askedBy(finishing.by)} asked for it.`;
+  if (by === '') return finishing === undefined ? null : 'Somebody has decided about the end of this run already.';
+  const endUtcMs = (cursor: RunContext['cursor']) => predictEndUtcMs(start, { ...context, cursor }, { nowUtcMs });
+  const whole = { ...context.cursor };
+  delete whole.finishByUtcMs;
+  const early = endUtcMs({ ...whole, finishByUtcMs: finishByUtcMs ?? 0 });
+  return early < endUtcMs(whole) ? null : 'Nothing would be left out: the pair under way is the last one of this run in any case.';
+}
+
+export function finishEarly(draft: Draft): void {
+  const { by, finishByUtcMs } = draft.told('finish-early');
+  const { context, nowUtcMs } = draft;
+  context.finishing = { by, askedUtcMs: nowUtcMs, finishByUtcMs, withdrawnBy: null };
+  heedFinishing(context);
+  draft.log('finish-asked', { by: askedBy(by), ...(finishByUtcMs === null ? {} : { overBy: iso(finishByUtcMs) }) });
+}
+
+export const refuseFinish = (draft: Draft): void =>
+  draft.log('finish-early-refused', { by: askedBy(draft.told('finish-early').by), why: finishRefusal(draft) });
+
+export function withdrawFinish(draft: Draft): void {
+  const { by } = draft.told('withdraw-finish');
+  const { context } = draft;
+  if (context.finishing === undefined) return;
+  draft.log('finish-withdrawn', { by, askedBy: askedBy(context.finishing.by) });
+  context.finishing = { ...context.finishing, withdrawnBy: by };
+  heedFinishing(context);
+}
+
+export const refuseWithdrawFinish = (draft: Draft): void =>
+  draft.log('withdraw-finish-refused', {
+    by: draft.told('withdraw-finish').by,
+    why: 'The run goes on to the end of its protocol already. Look at it again.',
+  });
+
+/** `, on a whole pair as Ben asked`; empty for a run that ends as its protocol says. */
+export function finishedWords({ finishing }: Pick<RunContext, 'finishing'>): string {
+  if (finishing === undefined || finishing.withdrawnBy !== null) return '';
+  return finishing.by === '' ? ', on a whole pair before the end of the night window' : `, on a whole pair as ${finishing.by} asked`;
+}
