@@ -1,7 +1,7 @@
 import type { ReactNode } from 'react';
 import { View } from 'react-native';
 import { UncertainText } from '@/components/evaluation/uncertain-text';
-import { Body, Label, Num, Panel, Section } from '@/components/ui';
+import { Body, Label, Panel, Section } from '@/components/ui';
 import type { MorningSheet } from '@/shared/contracts/morning';
 import type { RunView } from '@/shared/contracts/runs';
 import { formatReading } from '@/shared/lib/format-angle';
@@ -100,9 +100,9 @@ function Value({ value: { label, unit, one, other, inU } }: { value: ComparedVal
         ))}
       </View>
       {inU === null ? null : (
-        <Num size={13} tone={marked ? 'lamp' : 'dim'} strong={marked}>
+        <Body size={13} tone={marked ? 'lamp' : 'dim'} strong={marked}>
           {`differ by ${formatSignificant(inU, 2)} u of the difference${marked ? ', more than two' : ''}`}
-        </Num>
+        </Body>
       )}
     </View>
   );

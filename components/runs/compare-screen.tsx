@@ -39,7 +39,7 @@ export function CompareRunsScreen() {
 
 export const runTitle = ({ startedAt, createdAt, protocolName, protocolRevision, rehearsal }: RunSummary, timeZone: string): string => {
   const at = Date.parse(startedAt ?? createdAt);
-  const revision = protocolRevision === 0 ? '' : ` ${protocolRevision}`;
+  const revision = protocolRevision === 0 ? '' : `, revision ${protocolRevision}`;
   return `${formatDay(at, timeZone)} ${formatClock(at, { timeZone })}, ${rehearsal ? 'rehearsal of ' : ''}${protocolName}${revision}`;
 };
 

@@ -65,6 +65,8 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.reads('compared-steps', /begun 1 and 2 times/);
     await hand.reads('compared-steps', /only in the second/);
     await hand.shoots('compare');
+    await hand.at('compared-steps').scrollIntoViewIfNeeded();
+    await hand.shoots('compare-steps');
     await hand.tapsOn('All', 'radio');
     await hand.reads('compared-steps', /Home: finding the edge/);
   });

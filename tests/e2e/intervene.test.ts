@@ -188,7 +188,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     expect(Date.parse((await viewOf(runId)).predictedEndAt ?? '')).toBeLessThan(Date.parse(planned) - 600_000);
     await hand.taps('withdraw-finish');
     await hand.at('finish-pending').waitFor({ state: 'detached' });
-    expect((await viewOf(runId)).predictedEndAt).toBe(planned);
+    expect(Math.abs(Date.parse((await viewOf(runId)).predictedEndAt ?? '') - Date.parse(planned))).toBeLessThan(60_000);
   });
 
   chapter('hold after this dwell cuts nothing short', async () => {
