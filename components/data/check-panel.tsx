@@ -6,6 +6,8 @@ import { formatClock, formatDay, zoneName } from '@/shared/lib/format-time';
 
 /** What the whole file came to with this mapping: its span, or every problem by row and column. */
 export function CheckPanel({ check, timeZone }: { check: ImportCheck; timeZone: string }) {
+  const { outOfReach } = check.findings;
+  const leavable = outOfReach.leavable && outOfReach.rows === check.problemCount;
   const rows = formatFixed(check.rows, { decimals: 0 });
   const instant = (at: string) =>
     `${formatDay(Date.parse(at), timeZone)} ${formatClock(Date.parse(at), { timeZone, precision: 'seconds' })}`;
@@ -16,7 +18,7 @@ export function CheckPanel({ check, timeZone }: { check: ImportCheck; timeZone: 
         <Body strong className="shrink">
           {check.ok
             ? `All ${rows} rows can be read.`
-            : `${check.problemCount} problem${check.problemCount === 1 ? '' : 's'} in ${rows} rows. Nothing is stored until there are none.`}
+            : `${check.problemCount} problem${check.problemCount === 1 ? '' : 's'} in ${rows} rows.${leavable ? '' : ' Nothing is stored until there are none.'}`}
         </Body>
       </View>
       {check.firstAt === null || check.lastAt === null ? null : (

@@ -1,4 +1,4 @@
-import type { ImportCheck, ImportMapping, ImportView, SameInstant } from '@/shared/contracts/data';
+import { importChoicesSchema, type ImportCheck, type ImportChoices, type ImportMapping, type ImportView } from '@/shared/contracts/data';
 import { isTimeZone } from '@/shared/lib/is-time-zone';
 import type { MappingKey, RememberedMapping } from './remembered-mapping';
 
@@ -23,9 +23,9 @@ export interface ImportState {
   /** The mapping was filled in as last time. */
   remembered: boolean;
   channelName: string;
-  /** What becomes of a sample where the channel holds another value at its instant. */
-  sameInstant: SameInstant;
-  /** The check of exactly the present mapping. */
+  /** What becomes of whatever the check found; `refuse` where nothing was chosen yet. */
+  choices: ImportChoices;
+  /** The check of exactly the present mapping and name of the channel. */
   check: ImportCheck | null;
 }
 
@@ -33,7 +33,7 @@ export type ImportAction =
   | { kind: 'received'; imported: ImportView; remembered: RememberedMapping | null }
   | { kind: 'changed'; change: Partial<MappingDraft> }
   | { kind: 'named'; channelName: string }
-  | { kind: 'settled'; sameInstant: SameInstant }
+  | { kind: 'settled'; choices: Partial<ImportChoices> }
   | { kind: 'checked'; check: ImportCheck }
   | { kind: 'another-file' };
 
@@ -43,7 +43,7 @@ export const noImport = (channelName: string): ImportState => ({
   ambiguous: [],
   remembered: false,
   channelName,
-  sameInstant: 'refuse',
+  choices: importChoicesSchema.parse({}),
   check: null,
 });
 
@@ -54,11 +54,11 @@ export function importReducer(state: ImportState, action: ImportAction): ImportS
     case 'changed':
       return state.draft === null ? state : { ...state, draft: { ...state.draft, ...action.change }, check: null };
     case 'named':
-      return { ...state, channelName: action.channelName };
+      return { ...state, channelName: action.channelName, check: null };
     case 'settled':
-      return { ...state, sameInstant: action.sameInstant };
+      return { ...state, choices: { ...state.choices, ...action.choices } };
     case 'checked':
-      return { ...state, check: action.check };
+      return { ...state, check: action.check, choices: noImport('').choices };
     case 'another-file':
       return noImport(state.channelName);
   }
@@ -118,4 +118,15 @@ export function completeMapping(draft: MappingDraft): { mapping: ImportMapping; 
     ...(zoned && zone !== null && zone !== '' && zone !== 'UTC' ? { timeZone: zone } : {}),
   };
   return { mapping: { ...(rest as ImportMapping), ...extra }, missing: null };
+}
+
+/** What still stands against storing a file that was checked, in words; empty: nothing. */
+export function undecided({ problemCount, findings }: ImportCheck, choices: ImportChoices): string[] {
+  const { different, among, outOfReach } = findings;
+  const left = outOfReach.leavable && choices.outOfReach === 'leave-out' ? outOfReach.rows : 0;
+  return [
+    ...(problemCount > left ? ['rows that cannot be read'] : []),
+    ...(different > 0 && choices.sameInstant === 'refuse' ? ['which value counts at the same instant'] : []),
+    ...(among.rows > 0 && choices.among === 'refuse' ? ['what becomes of rows among other samples'] : []),
+  ];
 }

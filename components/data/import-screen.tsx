@@ -2,13 +2,15 @@ import { useLocalSearchParams, type Href } from 'expo-router';
 import { View } from 'react-native';
 import { useLab, useLabQuery, useMay, wordsOf } from '@/components/api';
 import { TextLink } from '@/components/runs/recent-steps';
-import { Body, Button, Empty, Field, Icon, Label, Loading, Panel, ProblemNotice, Screen, Section, Select } from '@/components/ui';
-import { readSamples, type SameInstant } from '@/shared/contracts/data';
+import { Body, Button, Empty, Field, Icon, Label, Loading, Panel, ProblemNotice, Screen, Section } from '@/components/ui';
+import { readSamples } from '@/shared/contracts/data';
 import { getRun, type RunView } from '@/shared/contracts/runs';
 import { formatFixed } from '@/shared/lib/format-number';
 import { CheckPanel } from './check-panel';
 import { FileDrop } from './file-drop';
+import { FindingsPanel } from './findings-panel';
 import { columnNames, previewRows, textOf } from './file-preview';
+import { undecided } from './import-draft';
 import { MappingForm } from './mapping-form';
 import { PreviewTable } from './preview-table';
 import { useImport, type StoredImport } from './use-import';
@@ -63,19 +65,22 @@ function ImportWork({ view, channelName }: { view: RunView; channelName: string 
       )}
       {step === 'sending' ? <Loading label="Sending the file" /> : null}
       {failure === null ? null : <ProblemNotice title={failure.title} detail={failure.detail} errors={failure.errors} />}
-      {state.check === null ? null : <CheckPanel check={state.check} timeZone={timeZone} />}
+      {state.check === null ? null : (
+        <>
+          <CheckPanel check={state.check} timeZone={timeZone} />
+          <FindingsPanel
+            {...{ findings: state.check.findings, choices: state.choices, timeZone, channelName: state.channelName }}
+            unit={state.draft?.unit ?? ''}
+            onChoice={work.settle}
+          />
+        </>
+      )}
       {state.draft === null ? null : <Acts work={work} />}
     </View>
   );
 }
 
 type Work = ReturnType<typeof useImport>;
-
-const sameInstants: { value: SameInstant; label: string }[] = [
-  { value: 'refuse', label: 'store nothing of the file' },
-  { value: 'keep', label: 'keep what is stored' },
-  { value: 'replace', label: 'replace it by the file’s' },
-];
 
 function ChosenFile({ work, view }: { work: Work; view: RunView }) {
   const { timeZone } = useLab();
@@ -120,26 +125,14 @@ function ChosenFile({ work, view }: { work: Work; view: RunView }) {
           onChange={work.change}
         />
       </Section>
-      <View className="gap-4 wide:flex-row">
-        <View className="wide:w-[270px]">
-          <Field
-            label="Name of the channel"
-            value={state.channelName}
-            onChange={work.name}
-            hint="The same name adds to a channel imported earlier."
-            testID="channel-name"
-          />
-        </View>
-        <View className="wide:w-[270px]">
-          <Select
-            label="Where the channel holds another"
-            value={state.sameInstant}
-            options={sameInstants}
-            onChange={work.settle}
-            hint="Another value at the same instant. Equal ones are stored once."
-            testID="same-instant"
-          />
-        </View>
+      <View className="wide:w-[270px]">
+        <Field
+          label="Name of the channel"
+          value={state.channelName}
+          onChange={work.name}
+          hint="The same name adds to a channel imported earlier."
+          testID="channel-name"
+        />
       </View>
     </View>
   );
@@ -148,23 +141,29 @@ function ChosenFile({ work, view }: { work: Work; view: RunView }) {
 function Acts({ work }: { work: Work }) {
   const { state, step, mapping } = work;
   const missing = mapping?.missing ?? [];
-  const ready = state.check?.ok === true && state.channelName.trim() !== '';
+  const open = state.check === null ? [] : undecided(state.check, state.choices);
+  const ready = state.check !== null && open.length === 0;
   return (
     <View className="gap-2">
       {missing.length === 0 ? null : <Label tone="text">Still to state: {missing.join(', ')}.</Label>}
+      {open.length === 0 ? null : (
+        <Label tone="text" testID="import-undecided">
+          Nothing can be stored yet: {open.join(', ')}.
+        </Label>
+      )}
       <View className="flex-row flex-wrap gap-3">
         <Button
           kind={ready ? 'plain' : 'primary'}
           label={state.check === null ? 'Check the file' : 'Check again'}
           busy={step === 'checking'}
-          disabled={missing.length > 0}
+          disabled={missing.length > 0 || state.channelName.trim() === ''}
           onPress={() => void work.check()}
           testID="check-import"
         />
         {ready ? (
           <Button
             kind="primary"
-            label={`Store ${formatFixed(state.check?.rows ?? 0, { decimals: 0 })} samples`}
+            label="Store the samples"
             busy={step === 'storing'}
             onPress={() => void work.store()}
             testID="store-import"
@@ -175,7 +174,7 @@ function Acts({ work }: { work: Work }) {
   );
 }
 
-function Stored({ runId, stored, known, other, sameInstant, channel, onAnother }: StoredImport & { runId: string; onAnother: () => void }) {
+function Stored({ runId, stored, known, other, leftOut, choices, channel, onAnother }: StoredImport & { runId: string; onAnother: () => void }) {
   const count = (number: number) => formatFixed(number, { decimals: 0 });
   return (
     <Panel edge="good" className="gap-3" testID="import-stored">
@@ -184,7 +183,8 @@ function Stored({ runId, stored, known, other, sameInstant, channel, onAnother }
         <Body strong className="shrink">
           {count(stored)} samples stored in {channel.name}
           {known > 0 ? `; ${count(known)} were there already` : ''}
-          {other > 0 ? `, ${count(other)} with another value, which was ${sameInstant === 'replace' ? 'replaced' : 'kept'}` : ''}.
+          {other > 0 ? `, ${count(other)} with another value, which was ${choices.sameInstant === 'replace' ? 'replaced' : 'kept'}` : ''}
+          {leftOut > 0 ? `; ${count(leftOut)} rows were left out` : ''}.
         </Body>
       </View>
       <View className="flex-row flex-wrap gap-2">

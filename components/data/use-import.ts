@@ -1,7 +1,7 @@
 import { useQueryClient } from '@tanstack/react-query';
 import { useReducer, useState } from 'react';
 import { call, labKey, useLab, wordsOf } from '@/components/api';
-import { beginImport, checkImport, commitImport, putImportContent, readSamples, type SameInstant } from '@/shared/contracts/data';
+import { beginImport, checkImport, commitImport, putImportContent, readSamples, type ImportChoices } from '@/shared/contracts/data';
 import { completeMapping, importReducer, noImport } from './import-draft';
 import { readRemembered, remember } from './remembered-mapping';
 
@@ -17,7 +17,8 @@ export interface StoredImport {
   stored: number;
   known: number;
   other: number;
-  sameInstant: SameInstant;
+  leftOut: number;
+  choices: ImportChoices;
   channel: { id: string; name: string };
 }
 
@@ -69,11 +70,14 @@ export function useImport(runId: string, channelName: string) {
       }),
     change: (change: Parameters<typeof completeMapping>[0] extends infer D ? Partial<D> : never) => dispatch({ kind: 'changed', change }),
     name: (name: string) => dispatch({ kind: 'named', channelName: name }),
-    settle: (sameInstant: SameInstant) => dispatch({ kind: 'settled', sameInstant }),
+    settle: (choices: Partial<ImportChoices>) => dispatch({ kind: 'settled', choices }),
     check: () =>
       attempt('checking', 'The file was not checked', async () => {
         if (!mapping?.mapping) return;
-        const { data } = await call(checkImport, { params: { labId, importId }, body: { mapping: mapping.mapping } });
+        const { data } = await call(checkImport, {
+          params: { labId, importId },
+          body: { mapping: mapping.mapping, channelName: state.channelName },
+        });
         dispatch({ kind: 'checked', check: data });
       }),
     store: () =>
@@ -81,10 +85,10 @@ export function useImport(runId: string, channelName: string) {
         if (!mapping?.mapping) return;
         const { data } = await call(commitImport, {
           params: { labId, importId },
-          body: { mapping: mapping.mapping, channelName: state.channelName, sameInstant: state.sameInstant },
+          body: { mapping: mapping.mapping, channelName: state.channelName, choices: state.choices },
         });
         remember(labId, state.imported?.preview?.columns.map((column) => column.name) ?? [], mapping.mapping);
-        setStored({ ...data, sameInstant: state.sameInstant });
+        setStored({ ...data, choices: state.choices });
         await queries.invalidateQueries({ queryKey: labKey(labId, readSamples) });
       }),
     anotherFile: () => {

@@ -7,6 +7,7 @@ import { from as copyFrom } from 'pg-copy-streams';
 import { demoIds } from '@/db/demo/seed';
 import { readCsv } from '@/server/ingest/csv-read';
 import { inTurns } from '@/server/ingest/receive-file';
+import { storeImport } from '@/server/store/import-commit';
 import * as store from '@/server/store/imports';
 import { insertRun } from '@/server/store/run-store';
 import { createSampleStore } from '@/server/store/sample-store';
@@ -18,7 +19,7 @@ import { sizesOf } from './lib/sizes';
 import { growth, quantile, report } from './report';
 
 /**
- * Stores CSV files of deflection as the import does: read from the kept pieces, parsed, checked, stored under the table's
+ * Stores CSV files of deflection as the import does: read from the kept pieces, parsed, staged, checked in SQL, stored under the table's
  * key. The peer is PostgreSQL's own COPY of the same rows into the same table.
  */
 
@@ -27,6 +28,7 @@ const startUtcMs = Date.UTC(2026, 0, 1);
 const intervalMs = 100;
 const rowsAPiece = 20_000;
 const batchesOfADevice = 200;
+const greatestSpanRad = 0.06;
 const runId = '5eed0000-0000-4000-8000-000000000900';
 const { lab: labId, rig: rigId } = demoIds;
 
@@ -86,15 +88,17 @@ async function ingest(database: BenchDatabase, rows: number): Promise<number> {
     storedAt: startUtcMs,
     mapping,
     window,
-    sameInstant: 'refuse' as const,
+    choices: { sameInstant: 'refuse' as const, among: 'refuse' as const },
   };
-  const limits = { greatestSpan: 0.06, nowUtcMs: startUtcMs + rows * intervalMs };
+  const limits = { nowUtcMs: startUtcMs + rows * intervalMs };
   const breathe = () => new Promise<void>((resolve) => void setImmediate(resolve));
   const cost = await seconds(async () => {
-    const { stored } = await store.storeImport(connection, work, async (take) => {
+    const { stored } = await storeImport(connection, work, async (staging) => {
       const pieces = inTurns(store.readPieces(connection.db, key), breathe);
-      const reading = await readCsv(pieces, { mapping, limits, take });
+      const reading = await readCsv(pieces, { mapping, limits, take: staging.take });
       if (reading.problemCount > 0) throw new Error(reading.problems[0]?.message);
+      if ((await staging.farValues(greatestSpanRad)) !== null) throw new Error('a value lies out of reach');
+      return { usualS: reading.medianIntervalS, leftOut: 0 };
     });
     if (stored !== rows) throw new Error(`${String(stored)} of ${String(rows)} rows were stored`);
   });

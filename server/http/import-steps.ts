@@ -1,15 +1,16 @@
-import type { ImportCheck, ImportMapping } from '@/shared/contracts/data';
+import type { ImportCheck, ImportChoices, ImportFindings, ImportMapping } from '@/shared/contracts/data';
 import { readCsv, type CsvProblem, type CsvReading } from '@/server/ingest/csv-read';
 import { greatestSpan } from '@/server/ingest/deflection-limits';
 import { inTurns } from '@/server/ingest/receive-file';
-import type { SampleBatch } from '@/server/interfaces/sample-store';
+import type { StagedFile, StagedFindings } from '@/server/store/import-commit';
+import type { FarValue, FarValues, Staging } from '@/server/store/import-staging';
 import { readPieces, type ImportRecord } from '@/server/store/imports';
 import type { RunRecord } from '@/server/store/runs-read';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { isTimeZone } from '@/shared/lib/is-time-zone';
 import { isoOrNull } from './maker';
 import { ProblemError } from './problem-error';
-import { startUtcMsOf } from './run-window';
+import { startUtcMsOf, windowOf } from './run-window';
 import type { Services } from './services';
 
 /** Refuses a mapping that cannot be meant, whatever the file holds. */
@@ -37,18 +38,27 @@ export function assertMapping(mapping: ImportMapping): void {
     ]);
 }
 
-/** Reads the kept file with a mapping; problems of the whole file come in front. */
+/** Of a file with more such values the unit is wrong, and leaving them out would not help. */
+const greatestShareOfFar = 0.1;
+
+export interface ImportReading extends CsvReading, StagedFile {
+  ok: boolean;
+  overlap: string;
+  outOfReach: ImportFindings['outOfReach'];
+}
+
+/** Reads the kept file with a mapping and stages its rows; problems of the whole file come in front. Far values are left out where that is chosen and they are few. */
 export async function readImport(
   services: Services,
-  source: { file: ImportRecord; run: RunRecord; mapping: ImportMapping },
-  take?: (batch: SampleBatch) => Promise<void>,
-): Promise<CsvReading & { ok: boolean; overlap: string }> {
-  const { file, run, mapping } = source;
+  source: { file: ImportRecord; run: RunRecord; mapping: ImportMapping; choices?: Pick<ImportChoices, 'outOfReach' | 'outsideRun'> },
+  staging: Staging,
+): Promise<ImportReading> {
+  const { file, run, mapping, choices } = source;
   const nowUtcMs = services.clock.utcMs();
   const span = greatestSpan(run.start.rig, mapping.unit);
   const pieces = inTurns(readPieces(services.database.db, { labId: file.labId, importId: file.id }), services.breathe);
-  const options = { mapping, limits: { greatestSpan: span === 'no-lever' ? null : span, nowUtcMs: Math.max(nowUtcMs, run.endedAt ?? 0) } };
-  const reading = await readCsv(pieces, take === undefined ? options : { ...options, take });
+  const limits = { nowUtcMs: Math.max(nowUtcMs, run.endedAt ?? 0) };
+  const reading = await readCsv(pieces, { mapping, limits, take: staging.take });
   const overlap = overlapOf(reading, run, nowUtcMs);
   const ofFile: CsvProblem[] = [];
   if (span === 'no-lever')
@@ -57,11 +67,33 @@ export async function readImport(
       column: null,
       message: `the unit ${mapping.unit} is a spot position, but the rig has no lever (distance from mirror to scale) to turn it into an angle`,
     });
+  const far = span === null || span === 'no-lever' ? null : await staging.farValues(span);
   if (reading.problemCount === 0 && overlap.share === 0)
     ofFile.push({ row: null, column: null, message: `${overlap.words}: are time format, zone and start of the mapping right?` });
-  const problems = [...ofFile, ...reading.problems].slice(0, 100);
-  const problemCount = reading.problemCount + ofFile.length;
-  return { ...reading, problems, problemCount, ok: problemCount === 0, overlap: overlap.words };
+  const leavable = far !== null && far.count <= greatestShareOfFar * staging.rows;
+  const leaves = leavable && choices?.outOfReach === 'leave-out';
+  const ofRows = far === null || leaves ? [] : far.first.map((value) => farProblem(value, { far, span: span as number, mapping, column: reading.valueColumn }));
+  const problems = [...ofFile, ...[...reading.problems, ...ofRows].sort((a, b) => (a.row ?? 0) - (b.row ?? 0))].slice(0, 100);
+  const problemCount = reading.problemCount + ofFile.length + (leaves ? 0 : (far?.count ?? 0));
+  let leftOut = leaves ? await staging.leaveOutFar(far, span as number) : 0;
+  if (choices?.outsideRun === 'leave-out') leftOut += await staging.leaveOutside(windowOf(run, services));
+  return {
+    ...{ ...reading, problems, problemCount, leftOut, ok: problemCount === 0, overlap: overlap.words, usualS: reading.medianIntervalS },
+    outOfReach: { rows: far?.count ?? 0, leavable },
+  };
+}
+
+function farProblem(
+  { row, value }: FarValue,
+  about: { far: FarValues; span: number; mapping: ImportMapping; column: string },
+): CsvProblem {
+  const { far, span, mapping, column } = about;
+  const short = (number: number) => `${String(Number(number.toPrecision(3)))} ${mapping.unit}`;
+  return {
+    row,
+    column,
+    message: `the value ${String(value)} ${mapping.unit} lies ${short(Math.abs(value - far.middle))} from the middle one of the file, and the pendulum can move ${short(span)} at most: is the unit right?`,
+  };
 }
 
 /** How the data lie against the run, in words, and the share of the run they cover. */
@@ -93,7 +125,7 @@ function spoken(ms: number): string {
   return s < 172_800 ? `${String(Math.round(s / 3600))} h` : `${String(Math.round(s / 86_400))} days`;
 }
 
-export const checkViewOf = (reading: Awaited<ReturnType<typeof readImport>>): ImportCheck => ({
+export const checkViewOf = (reading: ImportReading, findings: StagedFindings): ImportCheck => ({
   ok: reading.ok,
   rows: reading.rows,
   firstAt: isoOrNull(reading.firstUtcMs),
@@ -102,4 +134,5 @@ export const checkViewOf = (reading: Awaited<ReturnType<typeof readImport>>): Im
   problems: reading.problems,
   problemCount: reading.problemCount,
   overlap: reading.overlap,
+  findings: { ...findings, outOfReach: reading.outOfReach },
 });

@@ -1,5 +1,5 @@
 import type { ImportMapping } from '@/shared/contracts/data';
-import type { SampleBatch } from '../interfaces/sample-store';
+import type { RowBatch } from '../interfaces/sample-store';
 import { readNumber, timeReader, UnreadableField } from './csv-fields';
 import { BrokenTable, recordsOf } from './csv-lines';
 import { textOf } from './csv-text';
@@ -16,14 +16,14 @@ export interface CsvReading {
   firstUtcMs: number | null;
   lastUtcMs: number | null;
   medianIntervalS: number | null;
+  /** What the file calls the column of the values. */
+  valueColumn: string;
   /** The first 100. */
   problems: CsvProblem[];
   problemCount: number;
 }
 
 export interface CsvLimits {
-  /** Greatest distance of a value from the first one, in the mapping's unit: what the pendulum can turn from stop to stop. Null: not checked. */
-  greatestSpan: number | null;
   /** Instants after this are refused, UTC ms. */
   nowUtcMs: number;
 }
@@ -39,7 +39,7 @@ const dayMs = 86_400_000;
  */
 export async function readCsv(
   chunks: AsyncIterable<Uint8Array>,
-  options: { mapping: ImportMapping; limits: CsvLimits; take?: (batch: SampleBatch) => Promise<void> },
+  options: { mapping: ImportMapping; limits: CsvLimits; take?: (batch: RowBatch) => Promise<void> },
 ): Promise<CsvReading> {
   const reader = new RowReader(options.mapping, options.limits);
   const handover = new Handover(options.take ?? (async () => undefined));
@@ -64,10 +64,10 @@ export async function readCsv(
 class Handover {
   private underWay: Promise<void> = Promise.resolve();
 
-  constructor(private readonly take: (batch: SampleBatch) => Promise<void>) {}
+  constructor(private readonly take: (batch: RowBatch) => Promise<void>) {}
 
   /** @throws what the taking of the batch before was rejected with */
-  async give(batch: SampleBatch): Promise<void> {
+  async give(batch: RowBatch): Promise<void> {
     await this.end();
     if (batch.utcMs.length === 0) return;
     this.underWay = this.take(batch);
@@ -81,13 +81,14 @@ class Handover {
 }
 
 class RowReader {
+  private readonly lines = new Float64Array(batchSize);
   private readonly utcMs = new Float64Array(batchSize);
   private readonly value = new Float64Array(batchSize);
   pending = 0;
   private rows = 0;
   private headerDone: boolean;
   private names: string[] = [];
-  private first: { utcMs: number; value: number } | null = null;
+  private firstUtcMs: number | null = null;
   private lastUtcMs: number | null = null;
   private readonly intervalsMs: number[] = [];
   private readonly problems: CsvProblem[] = [];
@@ -123,10 +124,13 @@ class RowReader {
       return;
     }
     const utcMs = this.field(line, this.mapping.timeColumn, () => this.time(record[this.mapping.timeColumn]));
-    const value = this.field(line, this.mapping.valueColumn, () => this.deflection(record[this.mapping.valueColumn]));
+    const value = this.field(line, this.mapping.valueColumn, () =>
+      readNumber(record[this.mapping.valueColumn], this.mapping.decimal, 'value'),
+    );
     if (utcMs !== null) this.order(utcMs);
     if (utcMs === null || value === null) return;
-    this.first ??= { utcMs, value };
+    this.firstUtcMs ??= utcMs;
+    this.lines[this.pending] = line;
     this.utcMs[this.pending] = utcMs;
     this.value[this.pending] = value;
     this.pending += 1;
@@ -137,20 +141,10 @@ class RowReader {
     const last = this.lastUtcMs;
     if (utcMs > this.limits.nowUtcMs + dayMs)
       throw new UnreadableField(`the time ${iso(utcMs)} lies in the future: are time format and zone of the mapping right?`);
-    if (last !== null && utcMs === last) throw new UnreadableField(`the time ${iso(utcMs)} comes twice; each instant may have one value`);
+    if (last !== null && microseconds(utcMs) === microseconds(last)) throw new UnreadableField(`the time ${iso(utcMs)} comes twice; each instant may have one value`);
     if (last !== null && utcMs < last)
       throw new UnreadableField(`the time goes back from ${iso(last)} to ${iso(utcMs)}; rows must be in order of time`);
     return utcMs;
-  }
-
-  private deflection(field: string | undefined): number {
-    const value = readNumber(field, this.mapping.decimal, 'value');
-    const { greatestSpan } = this.limits;
-    if (greatestSpan !== null && this.first !== null && Math.abs(value - this.first.value) > greatestSpan)
-      throw new UnreadableField(
-        `the value ${String(value)} ${this.mapping.unit} lies ${String(Number(Math.abs(value - this.first.value).toPrecision(3)))} ${this.mapping.unit} from the first one, and the pendulum can move ${String(Number(greatestSpan.toPrecision(3)))} ${this.mapping.unit} at most: is the unit right?`,
-      );
-    return value;
   }
 
   private field(line: number, index: number, read: () => number): number | null {
@@ -158,9 +152,13 @@ class RowReader {
       return read();
     } catch (error) {
       if (!(error instanceof UnreadableField)) throw error;
-      this.problem(line, this.names[index]?.trim() || `column ${String(index + 1)}`, error.message);
+      this.problem(line, this.nameOf(index), error.message);
       return null;
     }
+  }
+
+  private nameOf(index: number): string {
+    return this.names[index]?.trim() || `column ${String(index + 1)}`;
   }
 
   private order(utcMs: number): void {
@@ -173,8 +171,8 @@ class RowReader {
     if (this.problems.length < problemsKept) this.problems.push({ row, column, message });
   }
 
-  batch(): SampleBatch {
-    const batch = { utcMs: this.utcMs.slice(0, this.pending), value: this.value.slice(0, this.pending) };
+  batch(): RowBatch {
+    const batch = { row: this.lines.slice(0, this.pending), utcMs: this.utcMs.slice(0, this.pending), value: this.value.slice(0, this.pending) };
     this.pending = 0;
     return batch;
   }
@@ -185,13 +183,17 @@ class RowReader {
     const median = sorted[Math.floor(sorted.length / 2)];
     return {
       rows: this.rows,
-      firstUtcMs: this.first?.utcMs ?? null,
+      firstUtcMs: this.firstUtcMs,
       lastUtcMs: this.lastUtcMs,
       medianIntervalS: median === undefined ? null : median / 1000,
+      valueColumn: this.nameOf(this.mapping.valueColumn),
       problems: this.problems,
       problemCount: this.problemCount,
     };
   }
 }
+
+/** Instants are kept to the microsecond. */
+const microseconds = (utcMs: number) => Math.round(utcMs * 1000);
 
 const iso = (utcMs: number) => new Date(utcMs).toISOString();

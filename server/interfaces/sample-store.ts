@@ -11,3 +11,8 @@ export interface SampleBatch {
   utcMs: Float64Array;
   value: Float64Array;
 }
+
+/** Samples of a file with the line on which each stands, from 1. */
+export interface RowBatch extends SampleBatch {
+  row: Float64Array;
+}

@@ -1,4 +1,4 @@
-import type { SampleBatch } from '../interfaces/sample-store';
+import type { RowBatch, SampleBatch } from '../interfaces/sample-store';
 
 /**
  * Samples in PostgreSQL's binary COPY format (documentation of COPY, "Binary Format"): a signature, then for each row the
@@ -32,6 +32,29 @@ export function* encodeSamples({ utcMs, value }: SampleBatch, keys: readonly str
       writeInt64(piece, microsecondsOf(utcMs[from + row] as number) - postgresEpochUs, at + 4);
       piece.writeInt32BE(8, at + 12);
       piece.writeDoubleBE(value[from + row] as number, at + 16);
+    }
+    yield piece;
+  }
+  yield Buffer.from([0xff, 0xff]);
+}
+
+const stagedBytes = 2 + 3 * 12;
+
+/** Pieces of the COPY stream of (bigint, timestamptz, double precision): row, instant, value. */
+export function* encodeRows({ row, utcMs, value }: RowBatch): Generator<Buffer> {
+  yield Buffer.concat([signature, Buffer.alloc(8)]);
+  for (let from = 0; from < utcMs.length; from += rowsAPiece) {
+    const count = Math.min(rowsAPiece, utcMs.length - from);
+    const piece = Buffer.alloc(count * stagedBytes);
+    for (let index = 0; index < count; index += 1) {
+      const at = index * stagedBytes;
+      piece.writeInt16BE(3, at);
+      piece.writeInt32BE(8, at + 2);
+      writeInt64(piece, row[from + index] as number, at + 6);
+      piece.writeInt32BE(8, at + 14);
+      writeInt64(piece, microsecondsOf(utcMs[from + index] as number) - postgresEpochUs, at + 18);
+      piece.writeInt32BE(8, at + 26);
+      piece.writeDoubleBE(value[from + index] as number, at + 30);
     }
     yield piece;
   }

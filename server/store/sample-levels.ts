@@ -32,11 +32,28 @@ export function coverOf({ fromUs, toUs }: { fromUs: number; toUs: number }, top:
   return [...coverOf({ fromUs, toUs: first }, below), { level: top, fromUs: first, toUs: last }, ...coverOf({ fromUs: last, toUs }, below)];
 }
 
+/** Time from `fromUs` up to `toUs`, both where buckets of level 0 begin. */
+export interface Stretch {
+  fromUs: number;
+  toUs: number;
+}
+
+/** The same stretches in their order, those as one that overlap or lie no farther apart than `closeUs`. */
+export function joinStretches(stretches: readonly Stretch[], closeUs: number): Stretch[] {
+  const joined: Stretch[] = [];
+  for (const { fromUs, toUs } of [...stretches].sort((a, b) => a.fromUs - b.fromUs)) {
+    const last = joined.at(-1);
+    if (last !== undefined && fromUs - last.toUs <= closeUs) last.toUs = Math.max(last.toUs, toUs);
+    else joined.push({ fromUs, toUs });
+  }
+  return joined;
+}
+
 /** Stretches of buckets of level 0 in which instants lie, in order; neighbours are one stretch. */
-export function stretchesOf(utcMs: Float64Array): { fromUs: number; toUs: number }[] {
+export function stretchesOf(utcMs: Float64Array): Stretch[] {
   const numbers = new Set<number>();
   for (const at of utcMs) numbers.add(Math.floor(microsecondsOf(at) / bucketUs));
-  const stretches: { fromUs: number; toUs: number }[] = [];
+  const stretches: Stretch[] = [];
   for (const number of [...numbers].sort((a, b) => a - b)) {
     const last = stretches.at(-1);
     if (last?.toUs === number * bucketUs) last.toUs += bucketUs;

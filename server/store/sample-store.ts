@@ -87,7 +87,7 @@ function assertUsable({ utcMs, value }: SampleBatch): void {
  * In place of a foreign key: the channel is of this lab and stays there until the transaction ends. Who adds to the same channel meanwhile waits, so that
  * its summaries are made of all that is there, but not for ever: whoever asked is told to come again.
  */
-async function assertChannel(client: PoolClient, { labId, channelId }: ChannelKey): Promise<void> {
+export async function assertChannel(client: PoolClient, { labId, channelId }: ChannelKey): Promise<void> {
   await client.query(`set local lock_timeout = '${longestWaitMs}ms'`);
   const known =
     isKey(labId) &&

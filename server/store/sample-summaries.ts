@@ -3,7 +3,7 @@ import { isKey, timestampOfUtcMs } from '@/db/schema/columns';
 import type { SampleBatch } from '../interfaces/sample-store';
 import type { Connection } from './database';
 import { microsecondsOf } from './sample-copy';
-import { bucketsOf, bucketUs, cellsOf, coverOf, stretchesOf, type Piece } from './sample-levels';
+import { bucketsOf, bucketUs, cellsOf, coverOf, stretchesOf, topLevel, widthUs, type Bucket, type Piece, type Stretch } from './sample-levels';
 
 /** What is asked of samples without reading them all: summaries where buckets lie wholly within the window, samples at its ends. */
 
@@ -23,8 +23,50 @@ const mostRead = 40_000;
 
 /** Computes the buckets of these instants anew, within the transaction of `client`, which has to hold the row of the channel. */
 export async function summariseSamples(client: PoolClient, channel: ChannelKey, utcMs: Float64Array): Promise<void> {
-  await client.query('select summarise_samples($1, $2, $3::timestamptz[], $4::timestamptz[])', ofStretches(channel, utcMs));
+  await client.query('select summarise_samples($1, $2, $3::timestamptz[], $4::timestamptz[])', ofStretches(channel, stretchesOf(utcMs)));
 }
+
+/** Some 18 h. */
+const stretchUs = widthUs(topLevel);
+const stretchesAtOnce = 50;
+
+/**
+ * Computes anew the buckets of level 0 in `own` and, once these are there, those above in `above`. A few stretches at a time and none of them long, so that
+ * no statement holds more than two hundred thousand buckets.
+ */
+export async function summariseStretches(
+  client: PoolClient,
+  channel: ChannelKey,
+  { own, above }: { own: readonly Stretch[]; above: readonly Stretch[] },
+): Promise<void> {
+  for (const few of inFew(own))
+    await client.query('select summarise_level_0($1, $2, $3::timestamptz[], $4::timestamptz[])', ofStretches(channel, few));
+  for (const few of inFew(above))
+    await client.query('select summarise_above($1, $2, $3::timestamptz[], $4::timestamptz[])', ofStretches(channel, few));
+}
+
+function* inFew(stretches: readonly Stretch[]): Generator<Stretch[]> {
+  const short = stretches.flatMap(({ fromUs, toUs }) =>
+    Array.from({ length: Math.ceil((toUs - fromUs) / stretchUs) }, (_, index) => ({
+      fromUs: fromUs + index * stretchUs,
+      toUs: Math.min(toUs, fromUs + (index + 1) * stretchUs),
+    })),
+  );
+  for (let from = 0; from < short.length; from += stretchesAtOnce) yield short.slice(from, from + stretchesAtOnce);
+}
+
+export const bucketColumns = 'at, count, least, least_at, greatest, greatest_at, mean';
+
+/** An array for each of `bucketColumns`. */
+export const bucketParameters = (buckets: readonly Bucket[]): unknown[] => [
+  buckets.map(({ fromUs }) => timestampOfUtcMs(fromUs / 1000)),
+  buckets.map(({ count }) => count),
+  buckets.map(({ least }) => least),
+  buckets.map(({ leastMs }) => timestampOfUtcMs(leastMs)),
+  buckets.map(({ greatest }) => greatest),
+  buckets.map(({ greatestMs }) => timestampOfUtcMs(greatestMs)),
+  buckets.map(({ mean }) => mean),
+];
 
 /**
  * The same, at a fraction of the cost, for a batch that lies where the channel had no sample between its first and its last instant: only the buckets of
@@ -41,18 +83,16 @@ export async function summariseFresh(client: PoolClient, channel: ChannelKey, ba
        $7::double precision[], $8::timestamptz[], $9::double precision[])
      on conflict (lab_id, channel_id, level, at) do update set count = excluded.count, least = excluded.least, least_at = excluded.least_at,
        greatest = excluded.greatest, greatest_at = excluded.greatest_at, mean = excluded.mean`,
-    [
-      ...[channel.labId, channel.channelId, own.map(({ fromUs }) => timestampOfUtcMs(fromUs / 1000)), own.map(({ count }) => count)],
-      ...[own.map(({ least }) => least), own.map(({ leastMs }) => timestampOfUtcMs(leastMs))],
-      ...[own.map(({ greatest }) => greatest), own.map(({ greatestMs }) => timestampOfUtcMs(greatestMs)), own.map(({ mean }) => mean)],
-    ],
+    [channel.labId, channel.channelId, ...bucketParameters(own)],
   );
-  await client.query('select summarise_level_0($1, $2, $3::timestamptz[], $4::timestamptz[])', ofStretches(channel, ends));
-  await client.query('select summarise_above($1, $2, $3::timestamptz[], $4::timestamptz[])', ofStretches(channel, batch.utcMs));
+  await client.query('select summarise_level_0($1, $2, $3::timestamptz[], $4::timestamptz[])', ofStretches(channel, stretchesOf(ends)));
+  await client.query(
+    'select summarise_above($1, $2, $3::timestamptz[], $4::timestamptz[])',
+    ofStretches(channel, stretchesOf(batch.utcMs)),
+  );
 }
 
-function ofStretches({ labId, channelId }: ChannelKey, utcMs: Float64Array): unknown[] {
-  const stretches = stretchesOf(utcMs);
+function ofStretches({ labId, channelId }: ChannelKey, stretches: readonly Stretch[]): unknown[] {
   const [froms, tos] = [stretches.map(({ fromUs }) => fromUs), stretches.map(({ toUs }) => toUs)];
   return [labId, channelId, froms.map((us) => timestampOfUtcMs(us / 1000)), tos.map((us) => timestampOfUtcMs(us / 1000))];
 }

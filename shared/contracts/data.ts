@@ -42,6 +42,18 @@ export type ImportMapping = z.infer<typeof importMappingSchema>;
 export const sameInstantSchema = z.enum(['refuse', 'keep', 'replace']);
 export type SameInstant = z.infer<typeof sameInstantSchema>;
 
+/** What becomes of whatever the dry run found: nothing is decided unasked. */
+export const importChoicesSchema = z.strictObject({
+  sameInstant: sameInstantSchema.default('refuse'),
+  /** Rows of the file that fall among samples which the channel holds at other instants: nothing at all is stored, both stay side by side, such rows are left out. */
+  among: z.enum(['refuse', 'both', 'leave-out']).default('refuse'),
+  /** Rows whose value lies beyond the reach of the pendulum: the file is refused, such rows are left out. */
+  outOfReach: z.enum(['refuse', 'leave-out']).default('refuse'),
+  /** Rows from before the run began or after it ended. */
+  outsideRun: z.enum(['store', 'leave-out']).default('store'),
+});
+export type ImportChoices = z.output<typeof importChoicesSchema>;
+
 /** Row numbers count lines of the file from 1, as an editor shows them. */
 export const importProblemSchema = z.strictObject({ row: z.number().int().nullable(), column: z.string().nullable(), message: z.string() });
 
@@ -63,6 +75,37 @@ export const importViewSchema = z.strictObject({
   preview: importPreviewSchema.nullable(),
 });
 export type ImportView = z.infer<typeof importViewSchema>;
+const stretchSchema = { fromAt: instantSchema, toAt: instantSchema };
+
+/** How the rows that could be read stand to the run and to what the channel of that name holds already. */
+export const importFindingsSchema = z.strictObject({
+  /** Samples of the channel from the first to the last instant of the file. */
+  held: z.number().int(),
+  /** Rows at instants of which the channel holds nothing, the same value, another value. */
+  fresh: z.number().int(),
+  equal: z.number().int(),
+  different: z.number().int(),
+  /** The first 20 of those with another value; `stored` and `inFile` in `unit` of the mapping. */
+  differing: z.array(z.strictObject({ row: z.number().int(), at: instantSchema, stored: z.number(), inFile: z.number() })),
+  /** Another value stands where a frozen evaluation does: it cannot be replaced. */
+  frozen: z.boolean(),
+  /** Fresh rows among samples of other instants, and the first 20 stretches in which they lie. */
+  among: z.strictObject({
+    rows: z.number().int(),
+    stretches: z.array(z.strictObject({ ...stretchSchema, rows: z.number().int(), held: z.number().int() })),
+  }),
+  /** Rows beyond the reach of the pendulum, which are problems too. `leavable`: few enough to be left out, else the unit is wrong. */
+  outOfReach: z.strictObject({ rows: z.number().int(), leavable: z.boolean() }),
+  outsideRun: z.strictObject({ before: z.number().int(), after: z.number().int() }),
+  /** Stretches without a row within the file, the 20 longest; `held`: samples that the channel has there. */
+  gaps: z.strictObject({
+    count: z.number().int(),
+    totalS: z.number(),
+    longest: z.array(z.strictObject({ ...stretchSchema, held: z.number().int() })),
+  }),
+});
+export type ImportFindings = z.infer<typeof importFindingsSchema>;
+
 export const importCheckSchema = z.strictObject({
   ok: z.boolean(),
   rows: z.number().int(),
@@ -74,9 +117,11 @@ export const importCheckSchema = z.strictObject({
   problemCount: z.number().int(),
   /** In words: how the data lie against the run, for example `covers 100 % of the run` or `covers 40 s of the run’s 2 h 48 min`. */
   overlap: z.string(),
+  findings: importFindingsSchema,
 });
 export type ImportCheck = z.infer<typeof importCheckSchema>;
 
+const channelNameSchema = z.string().min(1).max(80);
 const importPath = '/labs/:labId/imports/:importId';
 
 export const listChannels = defineRoute({
@@ -114,14 +159,14 @@ export const putImportContent = defineRoute({
 });
 export const checkImport = defineRoute({
   name: 'checkImport',
-  summary: 'Read the whole file with a mapping and list every problem by row; stores nothing',
+  summary: 'Read the whole file with a mapping, list every problem by row, compare it with what the channel holds; stores nothing',
   method: 'POST',
   path: `${importPath}/check`,
   access: 'data.import',
   status: 200,
-  body: z.strictObject({ mapping: importMappingSchema }),
+  body: z.strictObject({ mapping: importMappingSchema, channelName: channelNameSchema }),
   response: importCheckSchema,
-  problems: ['invalid-input', 'not-found', 'not-possible-now'],
+  problems: ['invalid-input', 'not-found', 'not-possible-now', 'already-exists'],
 });
 export const commitImport = defineRoute({
   name: 'commitImport',
@@ -131,13 +176,15 @@ export const commitImport = defineRoute({
   access: 'data.import',
   status: 200,
   idempotent: true,
-  body: z.strictObject({
-    mapping: importMappingSchema,
-    channelName: z.string().min(1).max(80),
-    sameInstant: sameInstantSchema.default('refuse'),
+  body: z.strictObject({ mapping: importMappingSchema, channelName: channelNameSchema, choices: importChoicesSchema.prefault({}) }),
+  /** `known`: instants that the channel held already, `other` of them with another value; `leftOut`: rows that were left out as was chosen. */
+  response: z.strictObject({
+    channel: channelViewSchema,
+    stored: z.number().int(),
+    known: z.number().int(),
+    other: z.number().int(),
+    leftOut: z.number().int(),
   }),
-  /** `known`: instants that the channel held already, `other` of them with another value. */
-  response: z.strictObject({ channel: channelViewSchema, stored: z.number().int(), known: z.number().int(), other: z.number().int() }),
   problems: ['invalid-input', 'not-found', 'unreadable-data', 'not-possible-now', 'already-exists'],
 });
 /** Both ends belong to the window; without one it reaches as far as the channel does. */

@@ -4,14 +4,15 @@ import type { ChannelView, ImportView } from '@/shared/contracts/data';
 import { sniffCsv } from '@/server/ingest/csv-sniff';
 import { UnreadableFile } from '@/server/ingest/csv-text';
 import { FileTooLarge, FileWatch } from '@/server/ingest/receive-file';
+import { storeImport, tryImport, type StoredSum } from '@/server/store/import-commit';
 import * as store from '@/server/store/imports';
 import type { Handle } from '@/server/store/database';
 import { findRig } from '@/server/store/rigs';
 import { channelsOfRun, findRun, type RunRecord } from '@/server/store/runs-read';
 import { countSamples, extremesOf } from '@/server/store/sample-summaries';
 import { enterAudit } from '../audited';
-import { assertMapping, checkViewOf, readImport } from '../import-steps';
-import { isoOf } from '../maker';
+import { refusalOf, wantedChannel } from '../import-refusals';
+import { assertMapping, checkViewOf, readImport, type ImportReading } from '../import-steps';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
 import { windowOf } from '../run-window';
@@ -87,31 +88,8 @@ function tooLarge(file: store.ImportRecord, services: Services): ProblemError {
   );
 }
 
-/** Why a file cannot go into the channel that was named. */
-function channelRefusal(channel: store.ChannelRecord, unit: string): ProblemError {
-  const item = [{ path: 'channelName', message: `a name other than ${channel.name}` }];
-  if (channel.source !== 'import')
-    return new ProblemError(
-      'already-exists',
-      `The channel ${channel.name} is filled by the rig itself. Choose another name for the imported one.`,
-      item,
-    );
-  return new ProblemError(
-    'already-exists',
-    `The channel ${channel.name} is in ${channel.unit}, the file in ${unit}. Choose another name, or the unit ${channel.unit}.`,
-    item,
-  );
-}
-
-const frozenRefusal = (channelName: string, atUtcMs: number) =>
-  new ProblemError(
-    'already-exists',
-    `Nothing was stored: at ${isoOf(atUtcMs)} the file has another value than ${channelName}, and a frozen evaluation stands on that night. Keep what is stored, or choose another channel name.`,
-    [{ path: 'sameInstant', message: 'keep what is stored' }],
-  );
-
 /** What the problems of a file say when it was to be stored. */
-function unreadable(file: store.ImportRecord, reading: Awaited<ReturnType<typeof readImport>>): ProblemError {
+function unreadable(file: store.ImportRecord, reading: ImportReading): ProblemError {
   const items = reading.problems.map(({ row, column, message }) => ({
     path: [row === null ? '' : `row ${String(row)}`, column ?? ''].filter((part) => part !== '').join(', '),
     message,
@@ -155,7 +133,16 @@ export const dataRoutes = [
     const file = await loadImport(services, membership.labId, params.importId);
     assertReceived(file);
     assertMapping(body.mapping);
-    return checkViewOf(await readImport(services, { file, run: await loadRun(services, file.labId, file.runId), mapping: body.mapping }));
+    const run = await loadRun(services, file.labId, file.runId);
+    const channel = wantedChannel(run, body, services);
+    try {
+      const { read, findings } = await tryImport(services.database, { channel, window: windowOf(run, services) }, (staging) =>
+        readImport(services, { file, run, mapping: body.mapping }, staging),
+      );
+      return checkViewOf(read, findings);
+    } catch (error) {
+      throw refusalOf(error, body);
+    }
   }),
 
   mount(contracts.commitImport, async (context) => {
@@ -164,44 +151,31 @@ export const dataRoutes = [
     assertReceived(file);
     assertMapping(body.mapping);
     const run = await loadRun(services, file.labId, file.runId);
-    const { channelName, mapping, sameInstant } = body;
-    const nowUtcMs = services.clock.utcMs();
-    const channel: store.WantedChannel = {
-      labId: run.labId,
-      rigId: run.rigId,
-      runId: run.rehearsal ? run.id : null,
-      name: channelName,
-      unit: mapping.unit,
-      quantity: mapping.unit.endsWith('rad') ? 'pendulum angle' : 'spot position',
-      role: 'deflection',
-      source: 'import',
-      createdAt: nowUtcMs,
-    };
-    const window = { fromUtcMs: run.startedAt ?? run.createdAt, toUtcMs: run.endedAt ?? nowUtcMs };
-    const also = (handle: Handle, { stored, other }: { stored: number; other: number }) =>
+    const { channelName, mapping, choices } = body;
+    const also = (handle: Handle, { stored, other, leftOut }: StoredSum) =>
       enterAudit(handle, context, {
         kind: 'run.data-imported',
-        data: { runId: run.id, importId: file.id, channelName, stored, ...(other === 0 ? {} : { other, sameInstant }) },
+        data: {
+          ...{ runId: run.id, importId: file.id, channelName, stored },
+          ...(other === 0 ? {} : { other, sameInstant: choices.sameInstant }),
+          ...(leftOut === 0 ? {} : { leftOut }),
+        },
       });
+    const channel = wantedChannel(run, body, services);
+    const key = { labId: file.labId, importId: file.id };
     try {
-      const done = await store.storeImport(
+      const done = await storeImport(
         services.database,
-        { labId: file.labId, importId: file.id, channel, storedAt: nowUtcMs, mapping, window, sameInstant, also },
-        async (take) => {
-          const reading = await readImport(services, { file, run, mapping }, take);
+        { ...key, channel, storedAt: channel.createdAt, mapping, window: windowOf(run, services), choices, also },
+        async (staging) => {
+          const reading = await readImport(services, { file, run, mapping, choices }, staging);
           if (!reading.ok) throw unreadable(file, reading);
+          return reading;
         },
       );
       return { ...done, channel: channelViewOf(done.channel) };
     } catch (error) {
-      if (error instanceof store.UnsuitableChannelError) throw channelRefusal(error.channel, mapping.unit);
-      if (error instanceof store.FrozenSamplesError) throw frozenRefusal(channelName, error.atUtcMs);
-      if (!(error instanceof store.ConflictingSamplesError)) throw error;
-      throw new ProblemError(
-        'already-exists',
-        `Nothing was stored: the channel ${channelName} holds another value at ${isoOf(error.atUtcMs)} already. Choose another channel name, or say which of both counts.`,
-        [{ path: 'sameInstant', message: 'keep what is stored, or replace it' }],
-      );
+      throw refusalOf(error, body);
     }
   }),
 

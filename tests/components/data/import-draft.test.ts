@@ -1,7 +1,15 @@
-import { completeMapping, importReducer, noImport, type ImportState } from '@/components/data/import-draft';
+import { completeMapping, importReducer, noImport, undecided, type ImportState } from '@/components/data/import-draft';
 import { columnNames, previewRows } from '@/components/data/file-preview';
 import type { RememberedMapping } from '@/components/data/remembered-mapping';
-import type { ImportView } from '@/shared/contracts/data';
+import type { ImportCheck, ImportView } from '@/shared/contracts/data';
+
+const findings: ImportCheck['findings'] = {
+  ...{ held: 0, fresh: 9, equal: 0, different: 0, differing: [], frozen: false, among: { rows: 0, stretches: [] } },
+  ...{ outOfReach: { rows: 0, leavable: false }, outsideRun: { before: 0, after: 0 }, gaps: { count: 0, totalS: 0, longest: [] } },
+};
+const check: ImportCheck = {
+  ...{ ok: true, rows: 9, firstAt: null, lastAt: null, medianIntervalS: null, problems: [], problemCount: 0, overlap: '', findings },
+};
 
 const imported = (ambiguous: string[]): ImportView => ({
   id: 'i1',
@@ -78,12 +86,23 @@ test('the mapping of last time fills in what is open, but only for a file with t
 });
 
 test('a changed mapping is unchecked again, and what was typed stays', () => {
-  const check = { ok: true, rows: 9, firstAt: null, lastAt: null, medianIntervalS: null, problems: [], problemCount: 0, overlap: '' };
   const checked = importReducer(importReducer(received([]), { kind: 'named', channelName: 'spot' }), { kind: 'checked', check });
   expect(checked.check).toBe(check);
   const changed = change(checked, { unit: 'm' });
   expect(changed.check).toBeNull();
   expect(changed.channelName).toBe('spot');
+  expect(importReducer(checked, { kind: 'named', channelName: 'other' }).check).toBeNull();
+});
+
+test('what the check found must be decided, each by itself, and anew after another check', () => {
+  const found = { ...check, ok: false, problemCount: 2, findings: { ...findings, different: 3, outOfReach: { rows: 2, leavable: true } } };
+  const checked = importReducer(received([]), { kind: 'checked', check: found });
+  expect(undecided(found, checked.choices)).toEqual(['rows that cannot be read', 'which value counts at the same instant']);
+  const settled = importReducer(checked, { kind: 'settled', choices: { outOfReach: 'leave-out', sameInstant: 'keep' } });
+  expect(undecided(found, settled.choices)).toEqual([]);
+  expect(undecided({ ...found, problemCount: 3 }, settled.choices)).toEqual(['rows that cannot be read']);
+  expect(undecided({ ...check, findings: { ...findings, among: { rows: 1, stretches: [] } } }, settled.choices)).toHaveLength(1);
+  expect(importReducer(settled, { kind: 'checked', check: found }).choices.sameInstant).toBe('refuse');
 });
 
 test('the preview follows the chosen delimiter', () => {
