@@ -38,13 +38,10 @@ export const importMappingSchema = z.strictObject({
 });
 export type ImportMapping = z.infer<typeof importMappingSchema>;
 
-/** What becomes of a sample of the file where the channel holds another value at the same instant: nothing at all is stored, the stored one stays, the new one counts. */
-export const sameInstantSchema = z.enum(['refuse', 'keep', 'replace']);
-export type SameInstant = z.infer<typeof sameInstantSchema>;
-
 /** What becomes of whatever the dry run found: nothing is decided unasked. */
 export const importChoicesSchema = z.strictObject({
-  sameInstant: sameInstantSchema.default('refuse'),
+  /** Where the channel holds another value at the same instant: nothing at all is stored, the stored one stays, that of the file counts. */
+  sameInstant: z.enum(['refuse', 'keep', 'replace']).default('refuse'),
   /** Rows of the file that fall among samples which the channel holds at other instants: nothing at all is stored, both stay side by side, such rows are left out. */
   among: z.enum(['refuse', 'both', 'leave-out']).default('refuse'),
   /** Rows whose value lies beyond the reach of the pendulum: the file is refused, such rows are left out. */

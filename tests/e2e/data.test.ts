@@ -187,6 +187,38 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.taps('store-import');
     await hand.reads('import-stored', new RegExp(`^0 samples stored in Balance ${size}; ${printed(night.length)} were there already`));
   });
+
+  chapter('a file that differs is compared before anything is stored, and what counts is chosen', async () => {
+    await hand.tapsOn('Import another file');
+    const path = join(folder, 'differs.csv');
+    const rows = night
+      .map(({ utcMs, rad }, index) => `${iso(utcMs)};21,4;${index === 5 ? '1,5' : commaUrad(rad)}`)
+      .filter((_, index) => index < 20 || index > 60);
+    writeFileSync(path, `time_utc;temperature_degC;deflection_urad\n${rows.join('\n')}\n`);
+    await send(path);
+    await hand.types('channel-name', `Balance ${size}`);
+    await hand.taps('check-import');
+    await hand.reads('import-findings', /1 row of the file has another value than Balance \w+ holds at the same instant/);
+    await hand.reads('import-findings', /The file has a gap, 42 s\. Gaps stay gaps: nothing is filled in\..*41 samples/);
+    await hand.reads('import-undecided', 'which value counts at the same instant');
+    expect(await hand.page.getByTestId('store-import').count()).toBe(0);
+    await hand.at('import-findings').scrollIntoViewIfNeeded();
+    await hand.shoots('import-findings');
+    await hand.chooses('same-instant', 'keep');
+    await hand.taps('store-import');
+    await hand.reads('import-stored', /^0 samples stored in .*, 1 with another value, which was kept\.$/);
+  });
+
+  chapter('a second record of the same time is shown by stretch, and left out where that is chosen', async () => {
+    await hand.tapsOn('Import another file');
+    await send(file('beside.csv', 'time_utc;temperature_degC;deflection_urad', ({ utcMs, rad }) => `${iso(utcMs + 400)};21,4;${commaUrad(rad)}`));
+    await hand.types('channel-name', `Balance ${size}`);
+    await hand.taps('check-import');
+    await hand.reads('import-findings', /rows fall among samples that Balance \w+ holds at other instants: two records of the same time/);
+    await hand.chooses('rows-among', 'leave-out');
+    await hand.taps('store-import');
+    await hand.reads('import-stored', /^1 samples stored in .*; \d[\d ]* rows were left out\.$/);
+  });
 });
 
 /** A count as pages print it: groups of three from five digits on, or from four. */

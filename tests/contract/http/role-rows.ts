@@ -176,7 +176,7 @@ export const rows: Readonly<Record<string, Row>> = {
   listChannels: { params: rig, allowed: 200 },
   beginImport: { params: run, body: () => ({ fileName: 'deflection.csv' }), allowed: 201 },
   putImportContent: { params: file, raw: 'time_utc,deflection_urad\n2031-02-14T20:00:00Z,1\n2031-02-14T20:00:01Z,2\n', allowed: 200 },
-  checkImport: { params: file, body: () => ({ mapping }), allowed: 200 },
+  checkImport: { params: file, body: () => ({ mapping, channelName: 'readout' }), allowed: 200 },
   commitImport: { params: file, body: () => ({ mapping: { ...mapping, valueColumn: 0 }, channelName: 'readout' }), allowed: 400 },
   readSamples: { params: run, allowed: 200 },
   exportSamplesCsv: { params: channel, query: () => ({ fromUtcMs: '5', toUtcMs: '4' }), allowed: 400 },
