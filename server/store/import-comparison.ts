@@ -105,13 +105,14 @@ export interface AmongStretch {
   held: number;
 }
 
-/** Samples of a channel that follow each other within `closeS` are one stretch. Made once in a transaction: $5 is `closeS`. */
+/** Samples of a channel that follow each other within `closeS` ($5) are one stretch, which may begin before the file and end after it. Made once in a transaction. */
 const heldStretches = `insert into held_stretches
   select min(at), max(at), count(*) filter (where apart) from (
     select at, apart, count(*) filter (where parted) over (order by at) as number from (
       select samples.at, staged_rows.at is null as apart, samples.at - lag(samples.at) over (order by samples.at) > $5::double precision * interval '1 s' as parted
       from samples left join staged_rows on staged_rows.at = samples.at
-      where samples.lab_id = $1 and samples.channel_id = $2 and samples.at between $3 and $4) as held) as numbered
+      where samples.lab_id = $1 and samples.channel_id = $2
+        and samples.at between $3::timestamptz - $5 * interval '1 s' and $4::timestamptz + $5 * interval '1 s') as held) as numbered
   group by number having count(*) filter (where apart) > 0 and min(at) < max(at)`;
 
 const rowsAmong = `staged_rows join held_stretches on staged_rows.at > held_stretches.since and staged_rows.at < held_stretches.until

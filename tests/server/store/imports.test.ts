@@ -129,19 +129,17 @@ test('rows among samples of other instants are refused, left out or stored besid
   const beside = rowsFrom(eveningUtcMs + 6500, 8);
   const found = await night.find(beside);
   expect(found).toMatchObject({ held: 3, fresh: 8, equal: 0, different: 0 });
-  // Between the two samples that lie in the time of the file there are two rows; the first row lies before both.
+  // At 6.5 s, 7.5 s and 8.5 s; the last sample is at 9 s.
   expect(found.among).toEqual({
-    rows: 2,
-    stretches: [
-      { fromAt: new Date(eveningUtcMs + 7000).toISOString(), toAt: new Date(eveningUtcMs + 9000).toISOString(), rows: 2, held: 3 },
-    ],
+    rows: 3,
+    stretches: [{ fromAt: new Date(eveningUtcMs).toISOString(), toAt: new Date(eveningUtcMs + 9000).toISOString(), rows: 3, held: 10 }],
   });
   await expect(night.bring({}, beside)).rejects.toThrow(RowsAmongSamplesError);
   expect(await night.count()).toBe(10);
-  expect(await night.bring({ among: 'leave-out' }, beside)).toEqual({ stored: 6, known: 0, other: 0, leftOut: 2 });
-  expect(await night.count()).toBe(16);
+  expect(await night.bring({ among: 'leave-out' }, beside)).toEqual({ stored: 5, known: 0, other: 0, leftOut: 3 });
+  expect(await night.count()).toBe(15);
   // Those that were left out before, and nothing else.
-  expect(await night.bring({ among: 'both' }, beside)).toEqual({ stored: 2, known: 6, other: 0, leftOut: 0 });
+  expect(await night.bring({ among: 'both' }, beside)).toEqual({ stored: 3, known: 5, other: 0, leftOut: 0 });
   expect(await night.count()).toBe(18);
 });
 
