@@ -60,7 +60,10 @@ function Different({ findings, choices, channelName, unit, timeZone, onChoice }:
   const keep = { value: 'keep' as const, label: 'what is stored' };
   const replace = { value: 'replace' as const, label: 'the value of the file' };
   return (
-    <Finding choose={open} sentence={`${rows(different)} of the file ${different === 1 ? 'has' : 'have'} another value than ${channelName} holds at the same instant.`}>
+    <Finding
+      choose={open}
+      sentence={`${rows(different)} of the file ${different === 1 ? 'has' : 'have'} another value than ${channelName} holds at the same instant.`}
+    >
       <Table
         label="Rows with another value"
         titles={['Row', `Time, ${zoneName(timeZone)}`, `Stored, ${unitSign(unit)}`, `In the file, ${unitSign(unit)}`]}
@@ -85,7 +88,10 @@ function Among({ findings: { among }, choices, channelName, timeZone, onChoice }
   const open = choices.among === 'refuse';
   const told = among.stretches.reduce((sum, stretch) => sum + stretch.rows, 0);
   return (
-    <Finding choose={open} sentence={`${rows(among.rows)} ${among.rows === 1 ? 'falls' : 'fall'} among samples that ${channelName} holds at other instants: two records of the same time.`}>
+    <Finding
+      choose={open}
+      sentence={`${rows(among.rows)} ${among.rows === 1 ? 'falls' : 'fall'} among samples that ${channelName} holds at other instants: two records of the same time.`}
+    >
       <Table
         label="Stretches with two records"
         titles={['From', 'To', 'Rows', 'Stored']}
@@ -117,7 +123,10 @@ function Among({ findings: { among }, choices, channelName, timeZone, onChoice }
 function OutOfReach({ findings: { outOfReach }, choices, onChoice }: FindingsPanelProps) {
   const open = choices.outOfReach === 'refuse';
   return (
-    <Finding choose={open} sentence={`${rows(outOfReach.rows)} ${outOfReach.rows === 1 ? 'lies' : 'lie'} beyond the reach of the pendulum, as listed above.`}>
+    <Finding
+      choose={open}
+      sentence={`${rows(outOfReach.rows)} ${outOfReach.rows === 1 ? 'lies' : 'lie'} beyond the reach of the pendulum, as listed above.`}
+    >
       <View className="wide:w-[270px]">
         <Select
           label="Values out of reach"

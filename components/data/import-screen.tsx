@@ -174,7 +174,16 @@ function Acts({ work }: { work: Work }) {
   );
 }
 
-function Stored({ runId, stored, known, other, leftOut, choices, channel, onAnother }: StoredImport & { runId: string; onAnother: () => void }) {
+function Stored({
+  runId,
+  stored,
+  known,
+  other,
+  leftOut,
+  choices,
+  channel,
+  onAnother,
+}: StoredImport & { runId: string; onAnother: () => void }) {
   const count = (number: number) => formatFixed(number, { decimals: 0 });
   return (
     <Panel edge="good" className="gap-3" testID="import-stored">

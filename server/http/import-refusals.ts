@@ -12,11 +12,7 @@ interface Asked {
 }
 
 /** The channel that a file of a run goes into. */
-export function wantedChannel(
-  run: RunRecord,
-  { channelName, mapping }: Asked,
-  { clock }: Pick<Services, 'clock'>,
-): WantedChannel {
+export function wantedChannel(run: RunRecord, { channelName, mapping }: Asked, { clock }: Pick<Services, 'clock'>): WantedChannel {
   return {
     labId: run.labId,
     rigId: run.rigId,

@@ -72,7 +72,10 @@ export async function readImport(
     ofFile.push({ row: null, column: null, message: `${overlap.words}: are time format, zone and start of the mapping right?` });
   const leavable = far !== null && far.count <= greatestShareOfFar * staging.rows;
   const leaves = leavable && choices?.outOfReach === 'leave-out';
-  const ofRows = far === null || leaves ? [] : far.first.map((value) => farProblem(value, { far, span: span as number, mapping, column: reading.valueColumn }));
+  const ofRows =
+    far === null || leaves
+      ? []
+      : far.first.map((value) => farProblem(value, { far, span: span as number, mapping, column: reading.valueColumn }));
   const problems = [...ofFile, ...[...reading.problems, ...ofRows].sort((a, b) => (a.row ?? 0) - (b.row ?? 0))].slice(0, 100);
   const problemCount = reading.problemCount + ofFile.length + (leaves ? 0 : (far?.count ?? 0));
   let leftOut = leaves ? await staging.leaveOutFar(far, span as number) : 0;
@@ -83,10 +86,7 @@ export async function readImport(
   };
 }
 
-function farProblem(
-  { row, value }: FarValue,
-  about: { far: FarValues; span: number; mapping: ImportMapping; column: string },
-): CsvProblem {
+function farProblem({ row, value }: FarValue, about: { far: FarValues; span: number; mapping: ImportMapping; column: string }): CsvProblem {
   const { far, span, mapping, column } = about;
   const short = (number: number) => `${String(Number(number.toPrecision(3)))} ${mapping.unit}`;
   return {

@@ -141,7 +141,8 @@ class RowReader {
     const last = this.lastUtcMs;
     if (utcMs > this.limits.nowUtcMs + dayMs)
       throw new UnreadableField(`the time ${iso(utcMs)} lies in the future: are time format and zone of the mapping right?`);
-    if (last !== null && microseconds(utcMs) === microseconds(last)) throw new UnreadableField(`the time ${iso(utcMs)} comes twice; each instant may have one value`);
+    if (last !== null && microseconds(utcMs) === microseconds(last))
+      throw new UnreadableField(`the time ${iso(utcMs)} comes twice; each instant may have one value`);
     if (last !== null && utcMs < last)
       throw new UnreadableField(`the time goes back from ${iso(last)} to ${iso(utcMs)}; rows must be in order of time`);
     return utcMs;
@@ -172,7 +173,11 @@ class RowReader {
   }
 
   batch(): RowBatch {
-    const batch = { row: this.lines.slice(0, this.pending), utcMs: this.utcMs.slice(0, this.pending), value: this.value.slice(0, this.pending) };
+    const batch = {
+      row: this.lines.slice(0, this.pending),
+      utcMs: this.utcMs.slice(0, this.pending),
+      value: this.value.slice(0, this.pending),
+    };
     this.pending = 0;
     return batch;
   }

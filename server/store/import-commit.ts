@@ -104,14 +104,13 @@ async function findingsOf(
   const differing = differs ? await differingRows(client, staging, keyOf(channel)) : [];
   const apart = compared.held - compared.equal - compared.different;
   const among =
-    key === null || apart === 0
-      ? { rows: 0, stretches: [] }
-      : await rowsAmongSamples(client, staging, { ...key, closeS: closeS(usualS) });
+    key === null || apart === 0 ? { rows: 0, stretches: [] } : await rowsAmongSamples(client, staging, { ...key, closeS: closeS(usualS) });
   const gaps = await gapsOfStaged(client, { longerS: gapS(usualS), channel: key });
   return {
     ...compared,
     differing: differing.map(({ row, utcMs, stored, inFile }) => ({ row, at: iso(utcMs), stored, inFile })),
-    frozen: differs && (await frozenDifference(client, staging, { ...keyOf(channel), rigId: channel.rigId, runId: channel.runId })) !== null,
+    frozen:
+      differs && (await frozenDifference(client, staging, { ...keyOf(channel), rigId: channel.rigId, runId: channel.runId })) !== null,
     among: {
       rows: among.rows,
       stretches: among.stretches.map(({ fromUtcMs, toUtcMs, rows, held }) => ({ fromAt: iso(fromUtcMs), toAt: iso(toUtcMs), rows, held })),

@@ -19,7 +19,8 @@ export interface Comparison {
 const nothingHeld = (staging: Staging): Comparison => ({ held: 0, fresh: staging.rows, equal: 0, different: 0 });
 
 /** Rows with what the channel holds at their instants; $1 and $2 are its key, $3 and $4 first and last instant. */
-const joined = 'samples on samples.lab_id = $1 and samples.channel_id = $2 and samples.at = staged_rows.at and samples.at between $3 and $4';
+const joined =
+  'samples on samples.lab_id = $1 and samples.channel_id = $2 and samples.at = staged_rows.at and samples.at between $3 and $4';
 
 const parametersOf = ({ labId, channelId }: ChannelKey, { firstUtcMs, lastUtcMs }: NonNullable<Staging['span']>) => [
   labId,

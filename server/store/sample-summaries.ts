@@ -3,7 +3,18 @@ import { isKey, timestampOfUtcMs } from '@/db/schema/columns';
 import type { SampleBatch } from '../interfaces/sample-store';
 import type { Connection } from './database';
 import { microsecondsOf } from './sample-copy';
-import { bucketsOf, bucketUs, cellsOf, coverOf, stretchesOf, topLevel, widthUs, type Bucket, type Piece, type Stretch } from './sample-levels';
+import {
+  bucketsOf,
+  bucketUs,
+  cellsOf,
+  coverOf,
+  stretchesOf,
+  topLevel,
+  widthUs,
+  type Bucket,
+  type Piece,
+  type Stretch,
+} from './sample-levels';
 
 /** What is asked of samples without reading them all: summaries where buckets lie wholly within the window, samples at its ends. */
 

@@ -211,7 +211,9 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
 
   chapter('a second record of the same time is shown by stretch, and left out where that is chosen', async () => {
     await hand.tapsOn('Import another file');
-    await send(file('beside.csv', 'time_utc;temperature_degC;deflection_urad', ({ utcMs, rad }) => `${iso(utcMs + 400)};21,4;${commaUrad(rad)}`));
+    await send(
+      file('beside.csv', 'time_utc;temperature_degC;deflection_urad', ({ utcMs, rad }) => `${iso(utcMs + 400)};21,4;${commaUrad(rad)}`),
+    );
     await hand.types('channel-name', `Balance ${size}`);
     await hand.taps('check-import');
     await hand.reads('import-findings', /rows fall among samples that Balance \w+ holds at other instants: two records of the same time/);

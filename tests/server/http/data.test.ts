@@ -1,8 +1,9 @@
 import { createHash } from 'node:crypto';
 import { demoIds } from '@/db/demo/seed';
-import type { ImportChoices, ImportMapping } from '@/shared/contracts/data';
+import type { ImportMapping } from '@/shared/contracts/data';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol } from '@/tests/support/lab-server';
+import { deflectionFiles, mapping } from './deflection-files';
 
 jest.setTimeout(60_000);
 
@@ -23,39 +24,9 @@ beforeAll(async () => {
 }, 60_000);
 afterAll(() => lab.stop());
 
-const mapping: ImportMapping = {
-  delimiter: ',',
-  decimal: '.',
-  headerRow: true,
-  timeColumn: 0,
-  timeFormat: 'iso',
-  valueColumn: 1,
-  unit: 'urad',
-};
+const files = deflectionFiles(() => ({ lab, runId, startUtcMs, endUtcMs }));
+const { deflection, begin, put, check, commit, sent } = files;
 
-/** Half a hertz of deflection over the whole run. */
-function deflection(change: (line: string, index: number) => string | null = (line) => line): string {
-  const lines = Array.from(
-    { length: Math.floor((endUtcMs - startUtcMs) / 2000) },
-    (_, index) => `${new Date(startUtcMs + 2000 * index).toISOString()},${(100 * Math.sin(index / 40)).toFixed(3)}`,
-  );
-  return `time_utc,deflection_urad\n${lines
-    .map(change)
-    .filter((line) => line !== null)
-    .join('\n')}\n`;
-}
-
-async function begin(fileName = 'night.csv'): Promise<string> {
-  const answer = await lab.as('analyst', 'POST', `${labPath}/runs/${runId}/imports`).send({ fileName }).expect(201);
-  return answer.body.id as string;
-}
-
-const put = (importId: string, text: string | Buffer, type = 'text/csv') =>
-  lab.as('analyst', 'PUT', `${labPath}/imports/${importId}/content`).set('Content-Type', type).send(text);
-const check = (importId: string, change: Partial<ImportMapping> = {}, channelName = 'readout') =>
-  lab.as('analyst', 'POST', `${labPath}/imports/${importId}/check`).send({ mapping: { ...mapping, ...change }, channelName });
-const commit = (importId: string, channelName: string, { choices, ...change }: Partial<ImportMapping> & { choices?: Partial<ImportChoices> } = {}) =>
-  lab.as('analyst', 'POST', `${labPath}/imports/${importId}/commit`).send({ mapping: { ...mapping, ...change }, channelName, choices });
 const samplesOf = async (channelName: string): Promise<number> => {
   const result = await database().connection.pool.query<{ n: string }>(
     "select count(*) as n from samples join channels on channels.id = samples.channel_id where channels.name = $1 and channels.source = 'import'",
@@ -63,12 +34,6 @@ const samplesOf = async (channelName: string): Promise<number> => {
   );
   return Number(result.rows[0]?.n);
 };
-const sent = async (text: string) => {
-  const id = await begin();
-  await put(id, text).expect(200);
-  return id;
-};
-
 describe('a deflection file', () => {
   test('is received, previewed, checked, stored and shown, and kept as it was sent with its SHA-256', async () => {
     const text = deflection();
@@ -130,60 +95,6 @@ describe('a deflection file', () => {
       'readout',
     ).expect(409);
     expect(other.body.detail).toContain(`holds another value at ${new Date(startUtcMs + 10_000).toISOString()}`);
-  });
-
-  test('that differs is compared row by row before anything is stored, and what counts is chosen', async () => {
-    const differs = deflection((line, index) => (index === 5 ? line.replace(/,.*/, ',99') : line));
-    const id = await sent(differs);
-    const { findings, ok } = (await check(id).expect(200)).body;
-    expect(ok).toBe(true);
-    expect(findings).toMatchObject({ fresh: 0, different: 1, frozen: false, among: { rows: 0 }, outsideRun: { before: 0, after: 0 } });
-    expect(findings.equal).toBe(findings.held - 1);
-    expect(findings.differing).toEqual([
-      { row: 7, at: new Date(startUtcMs + 10_000).toISOString(), stored: Number((100 * Math.sin(5 / 40)).toFixed(3)), inFile: 99 },
-    ]);
-    const kept = await commit(id, 'readout', { choices: { sameInstant: 'keep' } }).expect(200);
-    expect(kept.body).toMatchObject({ stored: 0, other: 1, leftOut: 0 });
-    expect((await commit(id, 'readout').expect(409)).body.detail).toContain('is stored already');
-    const replaced = await commit(await sent(differs), 'readout', { choices: { sameInstant: 'replace' } }).expect(200);
-    expect(replaced.body).toMatchObject({ stored: 0, other: 1 });
-    await commit(await sent(deflection()), 'readout', { choices: { sameInstant: 'replace' } }).expect(200);
-  });
-
-  test('of a second record of the same time is stored only where that is chosen', async () => {
-    const beside = deflection((line) => line.replace(/^[^,]*/, (at) => new Date(Date.parse(at) + 500).toISOString()));
-    const id = await sent(beside);
-    const { findings } = (await check(id).expect(200)).body;
-    expect(findings.among.rows).toBeGreaterThan(20);
-    const refused = await commit(id, 'readout').expect(409);
-    expect(refused.body.detail).toMatch(/^Nothing was stored: \d+ rows fall among samples that readout holds at other instants/);
-    expect(refused.body.errors[0].path).toBe('choices.among');
-    const before = await samplesOf('readout');
-    const left = await commit(id, 'readout', { choices: { among: 'leave-out' } }).expect(200);
-    expect(left.body.leftOut).toBe(findings.among.rows);
-    expect(await samplesOf('readout')).toBe(before + left.body.stored);
-  });
-
-  test('with a few values out of reach is refused, or stored without them where that is chosen', async () => {
-    const id = await sent(deflection((line, index) => (index === 0 || index === 9 ? line.replace(/,.*/, ',-90000') : line)));
-    const { ok, problemCount, findings } = (await check(id, {}, 'knocked').expect(200)).body;
-    expect([ok, problemCount, findings.outOfReach]).toEqual([false, 2, { rows: 2, leavable: true }]);
-    await commit(id, 'knocked').expect(422);
-    const stored = await commit(id, 'knocked', { choices: { outOfReach: 'leave-out' } }).expect(200);
-    expect(stored.body.leftOut).toBe(2);
-    expect(await samplesOf('knocked')).toBe(stored.body.stored);
-    const allWrong = await sent(deflection());
-    expect((await check(allWrong, { unit: 'rad' }, 'knocked in rad').expect(200)).body.findings.outOfReach.leavable).toBe(false);
-    await commit(allWrong, 'knocked in rad', { unit: 'rad', choices: { outOfReach: 'leave-out' } }).expect(422);
-  });
-
-  test('that reaches beyond the run can be cut to it', async () => {
-    const longer = `${deflection()}${[60, 62].map((s) => `${new Date(endUtcMs + 1000 * s).toISOString()},1`).join('\n')}\n`;
-    const id = await sent(longer);
-    const { findings } = (await check(id, {}, 'longer').expect(200)).body;
-    expect(findings).toMatchObject({ held: 0, outsideRun: { before: 0, after: 2 }, gaps: { count: 1 } });
-    const stored = await commit(id, 'longer', { choices: { outsideRun: 'leave-out' } }).expect(200);
-    expect(stored.body).toMatchObject({ leftOut: 2, stored: findings.fresh - 2 });
   });
 
   test('goes into no channel that the rig fills itself, nor into one of another unit', async () => {

@@ -1,13 +1,7 @@
 import { eq } from 'drizzle-orm';
 import { runs } from '@/db/schema';
 import { endEvaluation, freezeEvaluation, queueEvaluation } from '@/server/store/evaluations';
-import {
-  FrozenSamplesError,
-  RowsAmongSamplesError,
-  storeImport,
-  StoredMeanwhileError,
-  tryImport,
-} from '@/server/store/import-commit';
+import { FrozenSamplesError, RowsAmongSamplesError, storeImport, StoredMeanwhileError, tryImport } from '@/server/store/import-commit';
 import { beginImport, ConflictingSamplesError, findOrMakeChannel } from '@/server/store/imports';
 import type { Staging } from '@/server/store/import-staging';
 import { createSampleStore } from '@/server/store/sample-store';
@@ -58,7 +52,10 @@ async function nightWithSamples() {
   const store = createSampleStore(connection);
   await store.append(lab.id, channel.id, { utcMs, value: utcMs.map((_, k) => k) });
   const window = { labId: lab.id, channelId: channel.id, fromUtcMs: eveningUtcMs, toUtcMs: eveningUtcMs + 60_000 };
-  const again: Rows = [[...utcMs, eveningUtcMs + 10_000], [0, 1, 2, 99, 4, 5, 6, 7, 8, 9, 10]];
+  const again: Rows = [
+    [...utcMs, eveningUtcMs + 10_000],
+    [0, 1, 2, 99, 4, 5, 6, 7, 8, 9, 10],
+  ];
   return {
     /** Brings the same ten in again, the fourth as 99, and an eleventh; or other rows. */
     bring: async (choices: Partial<ImportChoices>, [at, value] = again) => {
@@ -68,13 +65,16 @@ async function nightWithSamples() {
         ...{ labId: lab.id, importId: file.id, channel: wanted, storedAt: eveningUtcMs, mapping, window },
         choices: { sameInstant: 'refuse' as const, among: 'refuse' as const, ...choices },
       };
-      const { channel: _, ...sum } = await storeImport(connection, work, (staging) => staged(staging, at, value));
+      const { stored, known, other, leftOut } = await storeImport(connection, work, (staging) => staged(staging, at, value));
       await expect(storeImport(connection, work, (staging) => staged(staging, at, value))).rejects.toThrow(StoredMeanwhileError);
-      return sum;
+      return { stored, known, other, leftOut };
     },
     find: async ([at, value] = again) =>
-      (await tryImport(connection, { channel: wanted, window: { fromUtcMs: at[1] as number, toUtcMs: at.at(-2) as number } }, (staging) => staged(staging, at, value)))
-        .findings,
+      (
+        await tryImport(connection, { channel: wanted, window: { fromUtcMs: at[1] as number, toUtcMs: at.at(-2) as number } }, (staging) =>
+          staged(staging, at, value),
+        )
+      ).findings,
     freeze: async () => {
       const job = { labId: lab.id, runId: start.runId, channel: 'readout', createdAt: eveningUtcMs, createdBy: 'Tam' };
       const { id } = await db.transaction((tx) => queueEvaluation(tx, job));
@@ -173,7 +173,13 @@ test('the summaries of an import are those that are computed from its samples, o
     ...{ labId: lab.id, rigId, runId: null, name: 'long', quantity: 'pendulum angle', unit: 'rad', createdAt: eveningUtcMs },
     ...{ role: 'deflection' as const, source: 'import' as const },
   };
-  const file = await beginImport(connection.db, { labId: lab.id, runId: start.runId, createdAt: eveningUtcMs, createdBy: 'Tam', fileName: 'a' });
+  const file = await beginImport(connection.db, {
+    labId: lab.id,
+    runId: start.runId,
+    createdAt: eveningUtcMs,
+    createdBy: 'Tam',
+    fileName: 'a',
+  });
   const batches: Rows[] = [
     rowsFrom(eveningUtcMs + 300, 4000, 137),
     rowsFrom(eveningUtcMs + 300 + 4000 * 137, 4000, 700),
@@ -181,10 +187,18 @@ test('the summaries of an import are those that are computed from its samples, o
   ];
   const work = {
     ...{ labId: lab.id, importId: file.id, channel: wanted, storedAt: eveningUtcMs, mapping },
-    ...{ window: { fromUtcMs: eveningUtcMs, toUtcMs: eveningUtcMs }, choices: { sameInstant: 'refuse' as const, among: 'refuse' as const } },
+    ...{
+      window: { fromUtcMs: eveningUtcMs, toUtcMs: eveningUtcMs },
+      choices: { sameInstant: 'refuse' as const, among: 'refuse' as const },
+    },
   };
   const { channel, stored } = await storeImport(connection, work, async (staging) => {
-    for (const [at, value] of batches) await staged(staging, at, value.map((k) => Math.sin(k)));
+    for (const [at, value] of batches)
+      await staged(
+        staging,
+        at,
+        value.map((k) => Math.sin(k)),
+      );
     return { usualS: 1, leftOut: 0 };
   });
   expect(stored).toBe(8500);

@@ -28,7 +28,7 @@ test('what is exported as CSV is imported to the same bits, by the mapping that 
         })(),
         {
           mapping,
-          limits: { greatestSpan: null, nowUtcMs },
+          limits: { nowUtcMs },
           take: async (batch) => {
             read.utcMs.push(...batch.utcMs);
             read.value.push(...batch.value);
