@@ -61,8 +61,8 @@ export interface StagedFile {
 
 /** Samples and rows that follow each other within ten usual intervals, 10 s at least, belong to one stretch. */
 const closeS = (usualS: number | null) => Math.max(10, 10 * (usualS ?? 1));
-/** A gap is longer than five usual intervals. */
-const gapS = (usualS: number | null) => 5 * (usualS ?? Infinity);
+/** A gap is longer than so many usual intervals. */
+const intervalsOfGap = 5;
 
 function assertSuitable(channel: ChannelRecord, wanted: WantedChannel): void {
   if (channel.source !== wanted.source || channel.unit !== wanted.unit) throw new UnsuitableChannelError(channel);
@@ -105,7 +105,8 @@ async function findingsOf(
   const apart = compared.held - compared.equal - compared.different;
   const among =
     key === null || apart === 0 ? { rows: 0, stretches: [] } : await rowsAmongSamples(client, staging, { ...key, closeS: closeS(usualS) });
-  const gaps = await gapsOfStaged(client, { longerS: gapS(usualS), channel: key });
+  const gaps =
+    usualS === null ? { count: 0, totalS: 0, longest: [] } : await gapsOfStaged(client, { longerS: intervalsOfGap * usualS, channel: key });
   return {
     ...compared,
     differing: differing.map(({ row, utcMs, stored, inFile }) => ({ row, at: iso(utcMs), stored, inFile })),
