@@ -3,6 +3,7 @@ import { View } from 'react-native';
 import { useLabQuery, useMay, wordsOf } from '@/components/api';
 import { Body, Button, Label, Panel, ProblemNotice, Select } from '@/components/ui';
 import { readSamples } from '@/shared/contracts/data';
+import { ClockChooser, useClockChoice } from './clock-chooser';
 import type { useEvaluations } from './use-evaluations';
 
 interface EvaluatePanelProps {
@@ -21,6 +22,11 @@ export function EvaluatePanel({ runId, evaluations, registeredChannel }: Evaluat
   const channel =
     chosen ?? (registeredChannel !== null && channels.includes(registeredChannel) ? registeredChannel : (channels[0] ?? null));
   const { newest, busy, start, startError, done } = evaluations;
+  const clock = useClockChoice(done?.result?.alignment ?? null);
+  const begin = () => {
+    const choice = clock.read();
+    if (choice !== null) start({ channel: channel ?? undefined, clock: choice });
+  };
   if (busy) return <AtWork state={newest?.state ?? 'queued'} />;
   return (
     <Panel className="gap-3" testID="evaluate-panel">
@@ -35,12 +41,13 @@ export function EvaluatePanel({ runId, evaluations, registeredChannel }: Evaluat
           onChange={setChosen}
         />
       ) : null}
+      {done === null || !may.ok ? null : <ClockChooser {...clock} />}
       <View className="flex-row flex-wrap items-center gap-3">
         <Button
           kind={done === null ? 'primary' : 'plain'}
           label={done === null ? 'Evaluate' : 'Evaluate again'}
           disabled={!may.ok || channels.length === 0}
-          onPress={() => start(channel ?? undefined)}
+          onPress={begin}
           testID="evaluate"
         />
         {may.ok ? null : (

@@ -22,14 +22,21 @@ export const freedomWords = (degrees: number): string =>
 
 /** Whether the evaluation is the one that was registered with the protocol, and if not, how it differs. */
 export function registeredWords(
-  result: Pick<EvaluationResult, 'registered' | 'method'>,
+  result: Pick<EvaluationResult, 'registered' | 'method'> & Partial<Pick<EvaluationResult, 'alignment'>>,
   protocol: ProtocolDocument | null,
   channel: string | null,
 ): { words: string; differs: boolean } {
   if (result.registered === null) return { words: 'no evaluation was registered', differs: false };
   if (result.registered) return { words: 'as registered', differs: false };
   const registered = protocol?.evaluation;
-  const differences = registered === undefined ? [] : registeredDifferences(registered, { method: result.method, channel });
+  const differences =
+    registered === undefined
+      ? []
+      : registeredDifferences(registered, {
+          method: result.method,
+          channel,
+          ...(result.alignment?.decided === undefined ? {} : { clock: result.alignment.decided }),
+        });
   return { words: `not as registered${differences.length === 0 ? '' : `: ${differences.join('; ')}`}`, differs: true };
 }
 
@@ -84,4 +91,26 @@ export function changeWords(now: { value: number; u: number | null }, then: { va
   if (now.u === null || then.u === null || now.value === 0 || then.value === 0) return change;
   const relative = (of: { value: number; u: number | null }) => formatPercent((of.u ?? 0) / Math.abs(of.value), 3);
   return `${change}; u ${relative(then)} of G instead of ${relative(now)}`;
+}
+
+/** What the estimated offset of the channel's clock is called. */
+export function clockName(alignment: EvaluationResult['alignment']): string {
+  if (alignment?.decided !== undefined) return 'clock offset by the data';
+  return alignment?.applied === true ? 'clock offset, applied' : 'clock offset, not applied';
+}
+
+/** What was decided about the channel's clock, and what G would be otherwise; empty where there is nothing to say. */
+export function clockWords({ alignment, G }: Pick<EvaluationResult, 'alignment' | 'G'>): string {
+  const { decided, otherwise } = alignment ?? {};
+  const done =
+    decided === undefined || decided.kind === 'estimated'
+      ? ''
+      : decided.kind === 'left'
+        ? 'The clock of the channel was left as it is, as somebody decided.'
+        : `The clock of the channel was set by ${formatSignificant(decided.offset_s, 4)} s, as somebody decided.`;
+  if (otherwise === undefined || otherwise.G === null || G === null) return done;
+  const change = otherwise.G / G.value - 1;
+  const size = Math.abs(change) < 1e-9 ? 'the same' : `${formatPercent(Math.abs(change))} ${change < 0 ? 'smaller' : 'greater'}`;
+  const other = otherwise.offset_s === 0 ? 'Left as it is' : `Set by ${formatSignificant(otherwise.offset_s, 4)} s`;
+  return `${done} ${other}, G would be ${size}.`.trim();
 }

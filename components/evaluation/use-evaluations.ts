@@ -1,6 +1,7 @@
 import { useQueryClient } from '@tanstack/react-query';
 import { labKey, serverNowMs, useLab, useLabMutation, useLabQuery } from '@/components/api';
 import { getEvaluation, listEvaluations, startEvaluation, type ListedEvaluation } from '@/shared/contracts/evaluations';
+import type { ClockChoice } from '@/shared/evaluation/registration';
 
 const pollMs = 1000;
 /** A run that is over is evaluated by the server itself, minutes later: so often and so long after its end the first is looked for. */
@@ -40,7 +41,7 @@ export function useEvaluations(runId: string, endedAt: string | null) {
     recomputationOf: (id: string): ListedEvaluation | null => items.find(({ recomputes }) => recomputes === id) ?? null,
     busy: atWork(newest?.state) || start.isPending,
     startError: start.error,
-    start: (channel?: string) => start.mutate({ params: { runId }, body: channel === undefined ? {} : { channel } }),
+    start: (choice: { channel?: string | undefined; clock?: ClockChoice | undefined }) => start.mutate({ params: { runId }, body: choice }),
   };
 }
 

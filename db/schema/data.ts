@@ -16,6 +16,7 @@ import type * as z from 'zod';
 import type { BrokerStatus, BrokerTopic } from '../../shared/contracts/brokers';
 import type { importMappingSchema, importPreviewSchema } from '../../shared/contracts/data';
 import type { GBasis } from '@/shared/evaluation/g-basis';
+import type { ClockChoice } from '../../shared/evaluation/registration';
 import type { EvaluationResult, FitCurve } from '../../shared/evaluation/result';
 import { bytea, instant, key } from './columns';
 import { labs } from './labs';
@@ -234,6 +235,8 @@ export const evaluations = pgTable(
     runId: key('run_id').notNull(),
     state: text('state', { enum: ['queued', 'running', 'done', 'failed'] }).notNull(),
     channel: text('channel'),
+    /** What somebody decided about the channel's clock; null: as the data tell it. */
+    clock: json('clock').$type<ClockChoice>(),
     createdAt: instant('created_at').notNull(),
     createdBy: text('created_by').notNull(),
     finishedAt: instant('finished_at'),

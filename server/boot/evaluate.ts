@@ -2,7 +2,13 @@ import { parseArgs } from 'node:util';
 import { readArchive } from '@/shared/archive/read-archive';
 import { UnusableArchive } from '@/shared/archive/unusable-archive';
 import { evaluateArchive } from '@/shared/evaluation/evaluate-archive';
-import { evaluationMethods, type EvaluationMethod, type EvaluationOptions } from '@/shared/evaluation/registration';
+import {
+  clockChoiceSchema,
+  evaluationMethods,
+  type ClockChoice,
+  type EvaluationMethod,
+  type EvaluationOptions,
+} from '@/shared/evaluation/registration';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { readArchiveFiles } from '../evaluation/archive-files';
 import { sha256Hex } from '../evaluation/sha256';
@@ -11,13 +17,14 @@ import { createTrialCrew } from './parallel-trials';
 /** `npm run -s evaluate -- PATH …`: G and its uncertainty from an archive, without server, database or network. */
 
 const usage =
-  'Usage: npm run -s evaluate -- PATH [--method equilibrium|period|acceleration|modulation] [--channel NAME] [--bound RAD] [--trials N]';
+  'Usage: npm run -s evaluate -- PATH [--method equilibrium|period|acceleration|modulation] [--channel NAME] [--bound RAD] [--trials N] [--clock left|SECONDS]';
 
 const options = {
   method: { type: 'string' },
   channel: { type: 'string' },
   bound: { type: 'string' },
   trials: { type: 'string' },
+  clock: { type: 'string' },
 } as const;
 
 class UnusableArguments extends Error {}
@@ -47,6 +54,7 @@ function requested(args: readonly string[]): Request {
       ...(values.method === undefined ? {} : { method: methodOf(values.method) }),
       ...(values.channel === undefined ? {} : { channel: values.channel }),
       ...(boundRad === undefined ? {} : { boundRad }),
+      ...(values.clock === undefined ? {} : { clock: clockOf(values.clock) }),
     },
   };
 }
@@ -57,6 +65,16 @@ function parsedArguments(args: readonly string[]) {
   } catch (error) {
     throw new UnusableArguments(`${error instanceof Error ? error.message : String(error)}\n${usage}`);
   }
+}
+
+function clockOf(text: string): ClockChoice {
+  if (text === 'left') return { kind: 'left' };
+  const choice = clockChoiceSchema.safeParse({ kind: 'set', offset_s: text.trim() === '' ? NaN : Number(text) });
+  if (!choice.success)
+    throw new UnusableArguments(
+      `--clock ${text}: "left", or by how many seconds the channel's clock is ahead of the step log's, is needed`,
+    );
+  return choice.data;
 }
 
 function methodOf(name: string): EvaluationMethod {

@@ -19,9 +19,10 @@ export const heavyTasks: HeavyTasks = {
   },
   zipArchive: async (input) => zipArchive(buildArchive(input, sha256Hex)),
   report: (input) => measurementReport(input),
-  evaluate: async (input, { channel }) => {
+  evaluate: async (input, { channel, clock }) => {
     const archive = readArchive(buildArchive(input, sha256Hex), sha256Hex);
-    const { result, curves, basis } = evaluateArchive(archive, { trials, besides: true, ...(channel === null ? {} : { channel }) });
+    const chosen = { ...(channel === null ? {} : { channel }), ...(clock === null ? {} : { clock }) };
+    const { result, curves, basis } = evaluateArchive(archive, { trials, besides: true, ...chosen });
     return { result, curves, basis };
   },
 };

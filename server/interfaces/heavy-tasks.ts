@@ -1,6 +1,7 @@
 import type { BuildArchiveInput } from '@/shared/archive/build-archive';
 import type { ChainedEvent, ChannelSeries, RunStart, SimulatedRun, StepRow } from '@/shared/archive/run-records';
 import type { GBasis } from '@/shared/evaluation/g-basis';
+import type { ClockChoice } from '@/shared/evaluation/registration';
 import type { EvaluationResult, FitCurve } from '@/shared/evaluation/result';
 import type { ReportInput } from './report';
 
@@ -35,5 +36,5 @@ export interface HeavyTasks {
    * Evaluates the archive that `zipArchive` would give.
    * @throws Error whose message says what makes the archive unusable
    */
-  evaluate(input: BuildArchiveInput, options: { channel: string | null }): Promise<EvaluationWork>;
+  evaluate(input: BuildArchiveInput, options: { channel: string | null; clock: ClockChoice | null }): Promise<EvaluationWork>;
 }

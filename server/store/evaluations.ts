@@ -1,5 +1,6 @@
 import { and, desc, eq, inArray, isNotNull, isNull } from 'drizzle-orm';
 import { evaluations } from '@/db/schema';
+import type { ClockChoice } from '@/shared/evaluation/registration';
 import type { EvaluationWork } from '../interfaces/heavy-tasks';
 import { one, type Handle, type Transaction } from './database';
 import { enqueueJob } from './jobs';
@@ -20,6 +21,7 @@ export interface NewEvaluation {
   labId: string;
   runId: string;
   channel: string | null;
+  clock: ClockChoice | null;
   createdAt: number;
   createdBy: string;
   /** The frozen evaluation that this one computes again. */
@@ -54,6 +56,7 @@ const listColumns = {
   runId: evaluations.runId,
   state: evaluations.state,
   channel: evaluations.channel,
+  clock: evaluations.clock,
   createdAt: evaluations.createdAt,
   createdBy: evaluations.createdBy,
   finishedAt: evaluations.finishedAt,

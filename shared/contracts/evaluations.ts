@@ -1,5 +1,6 @@
 import * as z from 'zod';
 import { gBasisSchema } from '../evaluation/g-basis';
+import { clockChoiceSchema } from '../evaluation/registration';
 import { evaluationResultSchema, fitCurveSchema } from '../evaluation/result';
 import { idSchema, instantSchema } from './common';
 import { defineRoute } from './route';
@@ -34,7 +35,7 @@ export const startEvaluation = defineRoute({
   access: 'evaluate',
   status: 202,
   idempotent: true,
-  body: z.strictObject({ channel: z.string().min(1).optional() }),
+  body: z.strictObject({ channel: z.string().min(1).optional(), clock: clockChoiceSchema.optional() }),
   response: evaluationViewSchema,
   problems: ['invalid-input', 'not-found', 'not-possible-now', 'cannot-evaluate'],
 });

@@ -7,7 +7,7 @@ import { coarseOffset, fineOffset, type ClockOffset } from './clock-offset';
 import { averagedAngles, reasonAgainstSamples, beginningOf, samplesIn, type DwellSamples } from './dwell-samples';
 import { dwellWindows, lengthS, type DwellWindow } from './dwell-windows';
 import { measuredOscillator, type FreeOscillator, type Known, type MeasuredOscillator } from './free-oscillator';
-import type { EvaluationPlan } from './registration';
+import type { ClockChoice, EvaluationPlan } from './registration';
 import { type Reversal } from './reversal';
 import { type Segment } from './segment';
 import { type DwellFit } from './ring-down-fit';
@@ -56,12 +56,17 @@ export function analyse(archive: Archive, plan: EvaluationPlan): Analysis {
     return whole === null || (wayOff !== null && wayOff.u < whole.u) ? wayOff : whole;
   };
   const found = best(near, wayOff?.value ?? 0);
-  const isTold = found !== null && Math.abs(found.value) > Math.max(2 * found.u, guardedS);
-  const offsetS = isTold ? found.value : 0;
+  const offsetS = takenOff(plan.clock, found);
   const last = analyseAt(archive, plan, { series, offsetS, judge: true, start: near.start });
   const whole = { ...last, clockOffset: best(last, offsetS) };
   const analysis: Analysis = { ...whole, byBeginnings: () => ({ ...analysis, ...last.begun() }) };
   return analysis;
+}
+
+/** What is taken off the channel's clock, s. */
+function takenOff(choice: ClockChoice, found: ClockOffset | null): number {
+  if (choice.kind !== 'estimated') return choice.kind === 'set' ? choice.offset_s : 0;
+  return found !== null && Math.abs(found.value) > Math.max(2 * found.u, guardedS) ? found.value : 0;
 }
 
 /** A coarse offset below this may be none, s; the fine search finds it. */

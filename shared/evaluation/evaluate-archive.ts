@@ -51,7 +51,7 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     method: plan.method,
     registered: plan.differences === null ? null : plan.differences.length === 0,
     chain: archive.chain,
-    alignment: alignmentOf({ clockOffset }),
+    alignment: alignmentOf(plan, clockOffset, { archive, options }),
     period_s: withU(free.period),
     decayTime_s: free.decayTime === null ? null : withU(free.decayTime),
     kappa_N_m: kappa,
@@ -70,7 +70,7 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
     warnings: [
       ...archive.warnings,
       ...registrationWarnings(archive, plan),
-      ...warningsOf(archive, { ...analysis, solution, clockOffset }, plan.method),
+      ...warningsOf(archive, { ...analysis, solution, clockOffset }, plan),
       ...warnings,
     ],
   };
@@ -80,10 +80,33 @@ export function evaluateArchive(archive: Archive, options: EvaluationOptions = {
 /** Other methods look at no difference of the dwells. */
 const nothing: Regressions = { regressions: [], warnings: [] };
 
-/** The offset is applied where it is more than twice its uncertainty. */
-function alignmentOf({ clockOffset }: Pick<Analysis, 'clockOffset'>): EvaluationResult['alignment'] {
-  const applied = clockOffset !== null && Math.abs(clockOffset.value) > 2 * clockOffset.u;
-  return { clockOffset_s: clockOffset, applied };
+interface Asked {
+  archive: Archive;
+  options: EvaluationOptions;
+}
+
+/** The offset is applied where it is more than twice its uncertainty, unless somebody decided otherwise; what the other way would give is tried too. */
+function alignmentOf({ clock }: EvaluationPlan, clockOffset: Analysis['clockOffset'], asked: Asked): EvaluationResult['alignment'] {
+  const isTold = clockOffset !== null && Math.abs(clockOffset.value) > 2 * clockOffset.u;
+  const applied = clock.kind === 'set' || (clock.kind === 'estimated' && isTold);
+  const otherS = applied ? 0 : isTold ? clockOffset.value : null;
+  return {
+    clockOffset_s: clockOffset,
+    applied,
+    ...(clock.kind === 'estimated' ? {} : { decided: clock }),
+    ...(asked.options.besides !== true || otherS === null ? {} : { otherwise: { offset_s: otherS, G: gWith(asked, otherS) } }),
+  };
+}
+
+/** G with this offset taken off instead; null where there is none. */
+function gWith({ archive, options }: Asked, offset_s: number): number | null {
+  try {
+    const { result } = evaluateArchive(archive, { ...options, besides: false, trials: 0, clock: { kind: 'set', offset_s } });
+    return result.G?.value ?? null;
+  } catch (error) {
+    if (error instanceof UnusableArchive) return null;
+    throw error;
+  }
 }
 
 /** An empty control has a further key for its test of equivalence. */

@@ -1,3 +1,4 @@
+import * as z from 'zod';
 import type { Archive } from '../archive/read-archive';
 import { listOf } from '../archive/read-archive';
 import { UnusableArchive } from '../archive/unusable-archive';
@@ -6,9 +7,21 @@ import { registeredDifferences } from './registered-differences';
 export type EvaluationMethod = 'equilibrium' | 'period' | 'acceleration' | 'modulation';
 export const evaluationMethods: readonly EvaluationMethod[] = ['equilibrium', 'period', 'acceleration', 'modulation'];
 
+/**
+ * What becomes of the offset between the channel's clock and the step log's: the estimated one is taken off where it is told well enough (the default),
+ * nothing is taken off, or what is known from elsewhere is, s (channel minus log).
+ */
+export const clockChoiceSchema = z.discriminatedUnion('kind', [
+  z.strictObject({ kind: z.literal('estimated') }),
+  z.strictObject({ kind: z.literal('left') }),
+  z.strictObject({ kind: z.literal('set'), offset_s: z.number().min(-86_400).max(86_400) }),
+]);
+export type ClockChoice = z.infer<typeof clockChoiceSchema>;
+
 export interface EvaluationOptions {
   method?: EvaluationMethod;
   channel?: string;
+  clock?: ClockChoice;
   /** Bound of equivalence of an empty control, rad. */
   boundRad?: number;
   /** Monte Carlo trials, 0 (the default here) for none. */
@@ -23,6 +36,7 @@ export interface EvaluationPlan {
   drift: 'aba' | 'polynomial' | 'gls';
   order: number;
   channel: string;
+  clock: ClockChoice;
   /** In words, how this differs from what was registered; null where nothing was registered. */
   differences: string[] | null;
 }
@@ -36,8 +50,10 @@ export function evaluationPlan(archive: Archive, options: EvaluationOptions): Ev
   const method = options.method ?? registered?.method ?? 'equilibrium';
   const drift = registered?.drift ?? 'aba';
   const channel = chooseChannel(archive, options.channel ?? registered?.channel ?? null);
-  const differences = registered === undefined || registered === null ? null : registeredDifferences(registered, { method, channel });
-  return { method, drift, order: registered?.order ?? 1, channel, differences };
+  const clock = options.clock ?? { kind: 'estimated' };
+  const differences =
+    registered === undefined || registered === null ? null : registeredDifferences(registered, { method, channel, clock });
+  return { method, drift, order: registered?.order ?? 1, channel, clock, differences };
 }
 
 function chooseChannel(archive: Archive, wanted: string | null): string {

@@ -1,4 +1,5 @@
 import * as z from 'zod';
+import { clockChoiceSchema } from './registration';
 
 /** What `evaluate` prints: the names, units and nulls of the archive format. u is a standard uncertainty (k = 1). */
 
@@ -91,7 +92,16 @@ export const evaluationResultSchema = z.strictObject({
   method: z.enum(methods),
   registered: z.boolean().nullable(),
   chain: z.strictObject({ events: z.number().int(), valid: z.literal(true).nullable() }),
-  alignment: z.strictObject({ clockOffset_s: withU.nullable(), applied: z.boolean() }).nullable(),
+  alignment: z
+    .strictObject({
+      clockOffset_s: withU.nullable(),
+      applied: z.boolean(),
+      /** What somebody decided; absent: as the data tell it. */
+      decided: clockChoiceSchema.optional(),
+      /** Absent where it was not tried, or the data tell no offset: G if this offset had been taken off instead, s. */
+      otherwise: z.strictObject({ offset_s: z.number(), G: z.number().nullable() }).optional(),
+    })
+    .nullable(),
   period_s: withU.nullable(),
   decayTime_s: withU.nullable(),
   kappa_N_m: withU.nullable(),

@@ -17,9 +17,9 @@ const noReversal: ArchiveWarning = {
 };
 
 /** What a reader of the result must know of how it came about. */
-export function warningsOf(archive: Archive, analysis: Analysis, method: EvaluationPlan['method']): ArchiveWarning[] {
+export function warningsOf(archive: Archive, analysis: Analysis, { method, clock }: EvaluationPlan): ArchiveWarning[] {
   const { free, solution, clockOffset } = analysis;
-  const warnings = [...oscillatorWarnings(free), ...clockWarnings(clockOffset)];
+  const warnings = [...oscillatorWarnings(free), ...clockWarnings(clockOffset, clock)];
   if (method === 'modulation' && solution !== null && solution.bigG < 0)
     warnings.push({
       code: 'sign',
@@ -107,14 +107,21 @@ const greatestClockS = 0.01;
 /** So far the guards about the swings cover an offset, s. */
 const harmlessClockS = 1;
 
-function clockWarnings(offset: Analysis['clockOffset']): ArchiveWarning[] {
+const becameOfIt = (choice: EvaluationPlan['clock']): string =>
+  choice.kind === 'estimated'
+    ? 'this was taken off'
+    : choice.kind === 'left'
+      ? 'it was left as it is, as was asked for'
+      : `instead ${String(choice.offset_s)} s was taken off, as was asked for`;
+
+function clockWarnings(offset: Analysis['clockOffset'], choice: EvaluationPlan['clock']): ArchiveWarning[] {
   if (offset === null) return [];
   const warnings: ArchiveWarning[] = [];
   const way = `${Math.abs(offset.value).toFixed(3)} s ${offset.value > 0 ? 'later' : 'earlier'}`;
   if (Math.abs(offset.value) > Math.max(2 * offset.u, greatestClockS)) {
     warnings.push({
       code: 'clock-offset',
-      message: `The channel's clock shows ${way} than the step log's (u ${offset.u.toFixed(3)} s); this was taken off.`,
+      message: `The channel's clock shows ${way} than the step log's (u ${offset.u.toFixed(3)} s); ${becameOfIt(choice)}.`,
     });
   }
   if (2 * offset.u > harmlessClockS) {

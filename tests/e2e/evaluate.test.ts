@@ -98,6 +98,27 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.taps('trial-reset');
   });
 
+  chapter('the clock of the channel is left as it is, and the page says what that changes; a number that is none is refused', async () => {
+    await hand.chooses('clock-way', 'set');
+    await hand.page.getByTestId('clock-offset').fill('soon');
+    await hand.taps('evaluate');
+    await hand.sees('A number of seconds within a day is needed');
+    await hand.shoots('clock-refused');
+    await hand.chooses('clock-way', 'left');
+    await hand.taps('evaluate');
+    await hand.at('evaluation-at-work').waitFor();
+    await lab().pass(5);
+    await hand.at('evaluate').waitFor();
+    await hand.reads('clock-effect', /The clock of the channel was left as it is, as somebody decided/);
+    await hand.at('clock-effect').scrollIntoViewIfNeeded();
+    await hand.shoots('clock-left');
+    await hand.chooses('clock-way', 'estimated');
+    await hand.taps('evaluate');
+    await hand.at('evaluation-at-work').waitFor();
+    await lab().pass(5);
+    await hand.at('evaluate').waitFor();
+  });
+
   chapter('the command gives the same G from the downloaded archive', async () => {
     const [download] = await Promise.all([hand.page.waitForEvent('download'), hand.taps('archive')]);
     expect(download.suggestedFilename()).toMatch(/\.zip$/);

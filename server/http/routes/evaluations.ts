@@ -55,8 +55,11 @@ export const evaluationRoutes = [
     const run = await loadRun(services, membership.labId, params.runId);
     assertEnded(run);
     const channel = await channelToEvaluate(services, run, body.channel);
-    const wanted = { labId: run.labId, runId: run.id, channel, createdAt: services.clock.utcMs(), createdBy: me.name };
-    const entry = { kind: 'run.evaluation-asked', data: ({ id }: { id: string }) => ({ runId: run.id, evaluationId: id, channel }) };
+    const clock = body.clock === undefined || body.clock.kind === 'estimated' ? null : body.clock;
+    const wanted = { labId: run.labId, runId: run.id, channel, clock, createdAt: services.clock.utcMs(), createdBy: me.name };
+    const decided = clock === null ? {} : { clock: clock.kind === 'left' ? 'left' : clock.offset_s };
+    const data = ({ id }: { id: string }) => ({ runId: run.id, evaluationId: id, channel, ...decided });
+    const entry = { kind: 'run.evaluation-asked', data };
     const evaluation = await audited(context, entry, (tx) => store.queueEvaluation(tx, wanted));
     services.pokeJobs();
     return viewOf(evaluation);
@@ -87,10 +90,10 @@ export const evaluationRoutes = [
   mount(contracts.recomputeEvaluation, async (context) => {
     const { params, me, membership, services } = context;
     const { labId } = membership;
-    const { id, runId, channel, frozenAt } = await loadEvaluation(services.database.db, labId, params.evaluationId);
+    const { id, runId, channel, clock, frozenAt } = await loadEvaluation(services.database.db, labId, params.evaluationId);
     if (frozenAt === null)
       throw new ProblemError('not-possible-now', 'This evaluation is not frozen. Freeze it first, or evaluate the run anew.');
-    const wanted = { labId, runId, channel, createdAt: services.clock.utcMs(), createdBy: me.name, recomputes: id };
+    const wanted = { labId, runId, channel, clock, createdAt: services.clock.utcMs(), createdBy: me.name, recomputes: id };
     const data = (made: { id: string }) => ({ runId, evaluationId: made.id, recomputes: id });
     const evaluation = await audited(context, { kind: 'run.evaluation-recomputed', data }, (tx) => store.queueEvaluation(tx, wanted));
     services.pokeJobs();

@@ -19,7 +19,7 @@ export async function workEvaluation(services: Services, job: Job): Promise<void
   try {
     const again = evaluation.recomputes === null ? null : await findEvaluation(db, evaluation.labId, evaluation.recomputes);
     const input = await archiveInputOf(services, run, (again ?? evaluation).createdAt);
-    const found = await services.tasks.evaluate(input, { channel: evaluation.channel });
+    const found = await services.tasks.evaluate(input, { channel: evaluation.channel, clock: evaluation.clock });
     const finishedAt = services.clock.utcMs();
     await endEvaluation(db, payload, { ...found, channel: evaluation.channel, software: softwareVersion, finishedAt });
   } catch (error) {

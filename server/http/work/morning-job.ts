@@ -46,7 +46,7 @@ export async function workMorning(services: Services, job: Job): Promise<void> {
   if ((channel === null && !atWork) || looks >= mostLooks) return sendMorning(services, run);
   const nowUtcMs = services.clock.utcMs();
   await db.transaction(async (tx) => {
-    if (channel !== null) await queueEvaluation(tx, { ...own, channel, createdAt: nowUtcMs, createdBy: byServer });
+    if (channel !== null) await queueEvaluation(tx, { ...own, channel, clock: null, createdAt: nowUtcMs, createdBy: byServer });
     await lookIn(tx, { ...own, looks: looks + 1 }, { nowUtcMs, inMs: lookAgainMs });
   });
   services.pokeJobs();

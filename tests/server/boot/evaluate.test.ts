@@ -72,6 +72,8 @@ describe('evaluate', () => {
     ['modulation where nothing turned', [folder, '--method', 'modulation'], 'steps.csv: the method "modulation" needs a rotation'],
     ['a bound that is none', [folder, '--bound', 'wide'], '--bound wide: a positive angle'],
     ['a bound without end', [folder, '--bound', 'Infinity'], '--bound Infinity: a positive angle'],
+    ['a clock that is none', [folder, '--clock', 'early'], '--clock early: "left", or by how many seconds'],
+    ['a clock a year off', [folder, '--clock', '31557600'], '--clock 31557600: "left"'],
     ['trials that are none', [folder, '--trials', '-5'], '--trials'],
     ['a channel that is not there', [folder, '--channel', 'laser'], 'there is no channel "laser"'],
     ['a file that is no archive', ['package.json'], 'not a readable ZIP'],

@@ -76,10 +76,17 @@ async function nightWithSamples() {
         )
       ).findings,
     freeze: async () => {
-      const job = { labId: lab.id, runId: start.runId, channel: 'readout', createdAt: eveningUtcMs, createdBy: 'Tam' };
+      const job = { labId: lab.id, runId: start.runId, channel: 'readout', clock: null, createdAt: eveningUtcMs, createdBy: 'Tam' };
       const { id } = await db.transaction((tx) => queueEvaluation(tx, job));
       const key = { labId: lab.id, evaluationId: id };
-      const end = { result: {} as EvaluationResult, curves: [], basis: null, channel: 'readout', software: '0', finishedAt: eveningUtcMs };
+      const end = {
+        result: {} as EvaluationResult,
+        curves: [],
+        basis: null,
+        channel: 'readout',
+        software: '0',
+        finishedAt: eveningUtcMs,
+      };
       await endEvaluation(db, key, end);
       await freezeEvaluation(db, { ...key, frozenAt: eveningUtcMs, frozenBy: 'Tam', frozenReason: 'published' });
     },

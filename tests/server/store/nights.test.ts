@@ -49,7 +49,7 @@ test('earlier nights are those of the rig that were evaluated, by their newest e
       .where(eq(runs.id, start.runId));
     for (const [index, value] of values.entries()) {
       const createdAt = at.endedAt + index;
-      const job = { labId: lab.id, runId: start.runId, channel: 'deflection', createdAt, createdBy: 'Tam' };
+      const job = { labId: lab.id, runId: start.runId, channel: 'deflection', clock: null, createdAt, createdBy: 'Tam' };
       const { id } = await db.transaction((tx) => queueEvaluation(tx, job));
       const result = { reversal_rad: { value, u: 1e-6, count: 3 }, period_s: null, decayTime_s: null, kappa_N_m: null } as EvaluationResult;
       const end = { result, curves: [], basis: null, channel: 'deflection', software: '0', finishedAt: createdAt };

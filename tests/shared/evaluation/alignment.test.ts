@@ -1,3 +1,4 @@
+import type { ClockChoice } from '@/shared/evaluation/registration';
 import { evaluateNight } from '../../support/evaluate-night';
 import { normalDeviates } from '../../support/lcg';
 import { alternatingAngles, type NightPlan } from '../../support/night';
@@ -49,6 +50,35 @@ test('with 5 µrad of noise at 1 Hz the offset is known to some ms, and its unce
   expect(u).toBeGreaterThan(0.001);
   expect(u).toBeLessThan(0.02);
   expect(Math.abs(value - 0.25)).toBeLessThan(3 * u);
+});
+
+describe('what somebody decides about a clock that is 98 s early', () => {
+  const late: NightPlan = { ...wide, channelLateS: -98 };
+  const decided = (clock: ClockChoice | undefined) =>
+    evaluateNight(late, { besides: true, ...(clock === undefined ? {} : { clock }) }).result;
+
+  test('left as it is, G comes out wrong, and the result says what it would be with the offset taken off', () => {
+    const { alignment, G, warnings } = decided({ kind: 'left' });
+    expect(alignment).toMatchObject({ applied: false, decided: { kind: 'left' } });
+    expect(alignment?.clockOffset_s?.value).toBeCloseTo(-98, 0);
+    expect(relativeDifference(G?.value ?? NaN, trueG)).toBeGreaterThan(1e-6);
+    expect(relativeDifference(alignment?.otherwise?.G ?? NaN, trueG)).toBeLessThan(1e-7);
+    expect(warnings.find(({ code }) => code === 'clock-offset')?.message).toContain('left as it is, as was asked for');
+  });
+
+  test('set by what is known from elsewhere, G is right, and the result says what it would be without', () => {
+    const { alignment, G } = decided({ kind: 'set', offset_s: -98 });
+    expect(alignment).toMatchObject({ applied: true, decided: { kind: 'set', offset_s: -98 }, otherwise: { offset_s: 0 } });
+    expect(relativeDifference(G?.value ?? NaN, trueG)).toBeLessThan(1e-7);
+    expect(alignment?.otherwise?.G).toBe(decided({ kind: 'left' }).G?.value);
+  });
+
+  test('accepted, it is the same as no decision, and says what leaving it would cost', () => {
+    const accepted = decided({ kind: 'estimated' });
+    expect(accepted).toEqual(decided(undefined));
+    expect(accepted.alignment?.decided).toBeUndefined();
+    expect(accepted.alignment?.otherwise).toEqual({ offset_s: 0, G: decided({ kind: 'left' }).G?.value });
+  });
 });
 
 test('a still night tells no offset', () => {
