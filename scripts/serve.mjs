@@ -1,7 +1,7 @@
 #!/usr/bin/env node
 /**
- * The server as one process, configured by its environment (docs/operations.md): built into one file first unless that is done already. Where nothing can be
- * written it is run file by file, which takes half a second longer. `--prepare` builds and ends.
+ * The server as one process, configured by its environment (docs/operations.md): built into one file first unless that is done already. Where that cannot
+ * be done it is run file by file, which takes half a second longer. `--prepare` builds and ends.
  */
 import { createRequire } from 'node:module';
 import { join } from 'node:path';
@@ -9,13 +9,14 @@ import { root } from './lib/paths.mjs';
 import { ensureServerBuild } from './lib/server-build.mjs';
 
 const require = createRequire(import.meta.url);
-const cannotWrite = new Set(['EACCES', 'EPERM', 'EROFS', 'ENOSPC']);
 
+/** The folder of the build; null where it could not be built, which keeps no server from running. */
 async function folderOfBuild() {
   try {
     return await ensureServerBuild();
   } catch (error) {
-    if (!cannotWrite.has(error.code) || process.argv.includes('--prepare')) throw error;
+    if (process.argv.includes('--prepare')) throw error;
+    process.stderr.write(`The server is run file by file, for it could not be built into one: ${String(error?.message ?? error)}\n`);
     return null;
   }
 }

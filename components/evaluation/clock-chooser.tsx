@@ -2,7 +2,7 @@ import { useState } from 'react';
 import { View } from 'react-native';
 import { Field, Label, Select } from '@/components/ui';
 import { readDecimal } from '@/components/ui/read-decimal';
-import type { ClockChoice } from '@/shared/evaluation/registration';
+import type { ClockChoice } from '@/shared/evaluation/clock-choice';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 
 type Alignment = EvaluationResult['alignment'];

@@ -1,7 +1,7 @@
 import { useQueryClient } from '@tanstack/react-query';
 import { labKey, serverNowMs, useLab, useLabMutation, useLabQuery } from '@/components/api';
 import { getEvaluation, listEvaluations, startEvaluation, type ListedEvaluation } from '@/shared/contracts/evaluations';
-import type { ClockChoice } from '@/shared/evaluation/registration';
+import type { ClockChoice } from '@/shared/evaluation/clock-choice';
 
 const pollMs = 1000;
 /** A run that is over is evaluated by the server itself, minutes later: so often and so long after its end the first is looked for. */

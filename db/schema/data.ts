@@ -16,7 +16,7 @@ import type * as z from 'zod';
 import type { BrokerStatus, BrokerTopic } from '../../shared/contracts/brokers';
 import type { importMappingSchema, importPreviewSchema } from '../../shared/contracts/data';
 import type { GBasis } from '@/shared/evaluation/g-basis';
-import type { ClockChoice } from '../../shared/evaluation/registration';
+import type { ClockChoice } from '../../shared/evaluation/clock-choice';
 import type { EvaluationResult, FitCurve } from '../../shared/evaluation/result';
 import { bytea, instant, key } from './columns';
 import { labs } from './labs';

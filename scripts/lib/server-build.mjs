@@ -61,9 +61,30 @@ function put(path, text) {
 }
 
 function forgetOld(kept) {
-  const folders = readdirSync(kept, { withFileTypes: true }).filter((entry) => entry.isDirectory());
-  const newestFirst = folders.map(({ name }) => join(kept, name)).sort((one, other) => statSync(other).mtimeMs - statSync(one).mtimeMs);
+  const builds = readdirSync(kept).filter((name) => /^[0-9a-f]{16}$/.test(name));
+  const changedMs = (folder) => statSync(folder, { throwIfNoEntry: false })?.mtimeMs ?? 0;
+  const newestFirst = builds.map((name) => join(kept, name)).sort((one, other) => changedMs(other) - changedMs(one));
   for (const folder of newestFirst.slice(KEPT)) rmSync(folder, { recursive: true, force: true });
+}
+
+/** What the last build was made of; null where there is none, or its note is no whole one. */
+function lastBuild(note) {
+  try {
+    const last = JSON.parse(readFileSync(note, 'utf8'));
+    return typeof last?.folder === 'string' && Array.isArray(last.inputs) ? last : null;
+  } catch {
+    return null;
+  }
+}
+
+/** Puts the build into its place; another process may have put the same there meanwhile. */
+function place(fresh, folder) {
+  try {
+    renameSync(fresh, folder);
+  } catch (error) {
+    if (!existsSync(folder)) throw error;
+    rmSync(fresh, { recursive: true, force: true });
+  }
 }
 
 /**
@@ -73,7 +94,7 @@ function forgetOld(kept) {
  */
 export async function ensureServerBuild({ base = root, kept = join(state, 'server'), files = entries } = {}) {
   const note = join(kept, 'build.json');
-  const last = existsSync(note) ? JSON.parse(readFileSync(note, 'utf8')) : null;
+  const last = lastBuild(note);
   if (last !== null && existsSync(join(kept, last.folder)) && last.inputs.every((mark) => isSame(base, mark)))
     return join(kept, last.folder);
   mkdirSync(kept, { recursive: true });
@@ -82,9 +103,7 @@ export async function ensureServerBuild({ base = root, kept = join(state, 'serve
     const paths = await build({ base, folder: fresh, files });
     const inputs = [...paths, ...builders.filter((path) => existsSync(join(base, path)))].map((path) => markOf(base, path));
     const name = createHash('sha256').update(JSON.stringify(inputs)).digest('hex').slice(0, 16);
-    // Another process may have built the same meanwhile.
-    if (existsSync(join(kept, name))) rmSync(fresh, { recursive: true, force: true });
-    else renameSync(fresh, join(kept, name));
+    place(fresh, join(kept, name));
     put(note, JSON.stringify({ folder: name, inputs }));
     forgetOld(kept);
     return join(kept, name);

@@ -2,13 +2,8 @@ import { parseArgs } from 'node:util';
 import { readArchive } from '@/shared/archive/read-archive';
 import { UnusableArchive } from '@/shared/archive/unusable-archive';
 import { evaluateArchive } from '@/shared/evaluation/evaluate-archive';
-import {
-  clockChoiceSchema,
-  evaluationMethods,
-  type ClockChoice,
-  type EvaluationMethod,
-  type EvaluationOptions,
-} from '@/shared/evaluation/registration';
+import { clockChoiceSchema, type ClockChoice } from '@/shared/evaluation/clock-choice';
+import { evaluationMethods, type EvaluationMethod, type EvaluationOptions } from '@/shared/evaluation/registration';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { readArchiveFiles } from '../evaluation/archive-files';
 import { sha256Hex } from '../evaluation/sha256';

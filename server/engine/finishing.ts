@@ -28,12 +28,13 @@ export function finishRefusal(draft: Draft): string | null {
   const { finishing } = context;
   if (finishing !== undefined && finishing.withdrawnBy === null && finishing.finishByUtcMs === finishByUtcMs)
     return `The run is to end early already: ${askedBy(finishing.by)} asked for it.`;
-  if (by === '') return finishing === undefined ? null : 'Somebody has decided about the end of this run already.';
+  if (by === '' && finishing !== undefined) return 'Somebody has decided about the end of this run already.';
   const endUtcMs = (cursor: RunContext['cursor']) => predictEndUtcMs(start, { ...context, cursor }, { nowUtcMs });
   const whole = { ...context.cursor };
   delete whole.finishByUtcMs;
   const early = endUtcMs({ ...whole, finishByUtcMs: finishByUtcMs ?? 0 });
-  return early < endUtcMs(whole) ? null : 'Nothing would be left out: the pair under way is the last one of this run in any case.';
+  if (early >= endUtcMs(whole)) return 'Nothing would be left out: the pair under way is the last one of this run in any case.';
+  return finishByUtcMs !== null && early > finishByUtcMs ? `Not even the pair under way would be over by ${iso(finishByUtcMs)}.` : null;
 }
 
 export function finishEarly(draft: Draft): void {
@@ -63,7 +64,10 @@ export const refuseWithdrawFinish = (draft: Draft): void =>
   });
 
 /** `, on a whole pair as Ben asked`; empty for a run that ends as its protocol says. */
-export function finishedWords({ finishing }: Pick<RunContext, 'finishing'>): string {
+export function finishedWords({ finishing }: Pick<RunContext, 'finishing'>, endUtcMs: number): string {
   if (finishing === undefined || finishing.withdrawnBy !== null) return '';
-  return finishing.by === '' ? ', on a whole pair before the end of the night window' : `, on a whole pair as ${finishing.by} asked`;
+  const late = finishing.finishByUtcMs !== null && endUtcMs > finishing.finishByUtcMs;
+  if (finishing.by === '')
+    return late ? ', on a whole pair, after the end of the night window' : ', on a whole pair before the end of the night window';
+  return `, on a whole pair as ${finishing.by} asked`;
 }

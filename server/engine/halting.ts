@@ -3,7 +3,7 @@ import { startRun } from './beginning';
 import type { Draft } from './draft';
 import type { ActiveStep, InterruptionCause, KnownController, RunEvent } from './run-context';
 import { finishMotion, reachedTarget, takeAhead, untoldEdge } from './motions';
-import { finishedWords } from './finishing';
+import { finishedWords, heedFinishing } from './finishing';
 import { slipRefusal } from './position';
 import { predictEndUtcMs } from './predicted-end';
 import { awaits, beginAwaiting } from './awaiting';
@@ -322,6 +322,7 @@ export function becomeHeld(draft: Draft): void {
   confirm(draft);
   closeForRest(draft);
   context.ahead = null;
+  heedFinishing(context);
   Object.assign(context, { holdAfterStep: null, haltedAtUtcMs: null, deadlineUtcMs: null, interruption: null });
   noteWound(draft, 'held');
   const { code = 'held', text = '' } = context.reason ?? {};
@@ -358,7 +359,7 @@ export function becomeFinished(draft: Draft): void {
   }
   end(draft, moment.utcMs);
   const why = asked && !release ? { driversWhy: 'the rig is not marked as safe when free (motion.safeWhenFree)' } : {};
-  const early = finishedWords(context);
+  const early = finishedWords(context, moment.utcMs);
   const before = early === '' ? {} : { early: early.slice(2) };
   draft.log('finished', { dwells: context.dwellsDone, drivers: release ? 'release' : 'keep', ...why, ...before }, moment);
   draft.notify('finished', early === '' ? 'The run finished as planned.' : `The run finished${early}.`);

@@ -1,7 +1,7 @@
 import type { BuildArchiveInput } from '@/shared/archive/build-archive';
 import type { ChainedEvent, ChannelSeries, RunStart, SimulatedRun, StepRow } from '@/shared/archive/run-records';
 import type { GBasis } from '@/shared/evaluation/g-basis';
-import type { ClockChoice } from '@/shared/evaluation/registration';
+import type { ClockChoice } from '@/shared/evaluation/clock-choice';
 import type { EvaluationResult, FitCurve } from '@/shared/evaluation/result';
 import type { ReportInput } from './report';
 

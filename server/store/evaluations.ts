@@ -1,6 +1,6 @@
 import { and, desc, eq, inArray, isNotNull, isNull } from 'drizzle-orm';
 import { evaluations } from '@/db/schema';
-import type { ClockChoice } from '@/shared/evaluation/registration';
+import type { ClockChoice } from '@/shared/evaluation/clock-choice';
 import type { EvaluationWork } from '../interfaces/heavy-tasks';
 import { one, type Handle, type Transaction } from './database';
 import { enqueueJob } from './jobs';

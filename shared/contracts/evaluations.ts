@@ -1,6 +1,6 @@
 import * as z from 'zod';
 import { gBasisSchema } from '../evaluation/g-basis';
-import { clockChoiceSchema } from '../evaluation/registration';
+import { clockChoiceSchema } from '../evaluation/clock-choice';
 import { evaluationResultSchema, fitCurveSchema } from '../evaluation/result';
 import { idSchema, instantSchema } from './common';
 import { defineRoute } from './route';

@@ -1,5 +1,5 @@
 import type { ProtocolDocument } from '../protocol/document';
-import type { ClockChoice } from './registration';
+import type { ClockChoice } from './clock-choice';
 import type { EvaluationResult } from './result';
 
 type Registered = NonNullable<ProtocolDocument['evaluation']>;

@@ -1,22 +1,11 @@
-import * as z from 'zod';
 import type { Archive } from '../archive/read-archive';
 import { listOf } from '../archive/read-archive';
 import { UnusableArchive } from '../archive/unusable-archive';
+import type { ClockChoice } from './clock-choice';
 import { registeredDifferences } from './registered-differences';
 
 export type EvaluationMethod = 'equilibrium' | 'period' | 'acceleration' | 'modulation';
 export const evaluationMethods: readonly EvaluationMethod[] = ['equilibrium', 'period', 'acceleration', 'modulation'];
-
-/**
- * What becomes of the offset between the channel's clock and the step log's: the estimated one is taken off where it is told well enough (the default),
- * nothing is taken off, or what is known from elsewhere is, s (channel minus log).
- */
-export const clockChoiceSchema = z.discriminatedUnion('kind', [
-  z.strictObject({ kind: z.literal('estimated') }),
-  z.strictObject({ kind: z.literal('left') }),
-  z.strictObject({ kind: z.literal('set'), offset_s: z.number().min(-86_400).max(86_400) }),
-]);
-export type ClockChoice = z.infer<typeof clockChoiceSchema>;
 
 export interface EvaluationOptions {
   method?: EvaluationMethod;

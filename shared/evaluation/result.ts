@@ -1,5 +1,5 @@
 import * as z from 'zod';
-import { clockChoiceSchema } from './registration';
+import { clockChoiceSchema } from './clock-choice';
 
 /** What `evaluate` prints: the names, units and nulls of the archive format. u is a standard uncertainty (k = 1). */
 

@@ -31,7 +31,7 @@ export interface CursorState {
   /** The swing to the station of `atEnd` has been given out. */
   atEndGiven: boolean;
   /**
-   * The run is to be over by then, UTC ms: of a repeat that moves the sources no pass begins after which it would not be. 0: none begins at all. A pair
+   * The run is to be over by then, UTC ms: of a repeat that makes pairs no pass begins after which it would not be. 0: none begins at all. A pair
    * lies within one pass, so the run ends on a whole one. Absent: it goes on to the end of its protocol.
    */
   finishByUtcMs?: number;
@@ -191,7 +191,7 @@ interface Passing {
 }
 
 function anotherPass(repeat: RepeatStep, frame: CursorFrame, context: Passing): boolean {
-  if (movesSources(repeat) && !finishesInTime(context)) return false;
+  if (makesPairs(repeat) && !finishesInTime(context)) return false;
   if (repeat.atMost !== undefined && frame.pass >= repeat.atMost) return false;
   if (frame.deadlineUtcMs !== null) return passEndsBy(frame.deadlineUtcMs, context);
   if (repeat.until !== undefined && 'relativeStatisticalU' in repeat.until)
@@ -212,9 +212,16 @@ function isReached(wanted: number, { plan, moment }: { plan: CursorPlan; moment:
 /** An instant taken from the controller's stamps may be off the plan by some µs: so near to the deadline counts as on it, ms. */
 const roundingMs = 0.5;
 
-/** Whether a step, or one within it, moves the sources from station to station. */
-const movesSources = (step: Step): boolean =>
-  step.kind === 'repeat' ? step.steps.some(movesSources) : step.kind === 'swing' || step.kind === 'kick' || step.kind === 'rotate';
+/** Where the swings of some steps go, those within repeats too; a rotation goes everywhere. */
+const targetsOf = (steps: readonly Step[]): string[] =>
+  steps.flatMap((step) => {
+    if (step.kind === 'repeat') return targetsOf(step.steps);
+    if (step.kind === 'rotate') return ['round', 'and round'];
+    return step.kind === 'swing' ? [JSON.stringify(step.to)] : [];
+  });
+
+/** Whether a pass of it holds whole pairs: one that goes to a single side is a part of the pair that it stands in, and is never left out alone. */
+const makesPairs = ({ steps }: RepeatStep): boolean => new Set(targetsOf(steps)).size > 1;
 
 /** Whether the whole run would be over in time, by plan, if this pass were made and none after it. */
 function finishesInTime({ plan, moment, again }: Passing): boolean {

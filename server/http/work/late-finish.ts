@@ -29,6 +29,8 @@ function endsForWindow(
 ): string | null {
   if (finishing === null || finishing.by !== '' || finishing.withdrawnBy !== null || finishing.finishByUtcMs === null) return null;
   const clock = (utcMs: number) => formatClock(utcMs, { timeZone });
+  // Held for long, it may be too late even so: then that is what is told.
+  if (predictedEndUtcMs !== null && predictedEndUtcMs > finishing.finishByUtcMs) return null;
   const early = predictedEndUtcMs === null ? '' : `, at about ${clock(predictedEndUtcMs)}`;
   return `The night window ends at ${clock(finishing.finishByUtcMs)}: the run ends on a whole pair before that${early}.`;
 }

@@ -1,8 +1,9 @@
-import { execFileSync } from 'node:child_process';
+import { execFile, execFileSync } from 'node:child_process';
 import { mkdirSync, mkdtempSync, readdirSync, readFileSync, rmSync, statSync, symlinkSync, utimesSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { pathToFileURL } from 'node:url';
+import { promisify } from 'node:util';
 
 /** The server in one file: built when its files changed and only then, and each of its files still knows where it lies. */
 jest.setTimeout(60_000);
@@ -65,4 +66,21 @@ test('builds that a running server may still begin threads from are kept, older 
   expect(kept.length).toBe(4);
   expect(run(folders[5] ?? '')).toBe('5');
   expect(run(folders[2] ?? '')).toBe('2');
+});
+
+test('a note that was cut short by a power cut means a new build, and builds at one time do not end each other', async () => {
+  const folder = ensured();
+  writeFileSync(join(base, 'kept', 'build.json'), '{"folder": "');
+  expect(run(ensured())).toBe(`first ${join(base, 'deep')}`);
+  writeFileSync(join(base, 'main.ts'), 'console.log(7);\n');
+  const module = pathToFileURL(join(root, 'scripts', 'lib', 'server-build.mjs')).href;
+  const setting = JSON.stringify({ base, kept: join(base, 'kept'), files: ['main.ts'] });
+  const program = `import { ensureServerBuild } from ${JSON.stringify(module)}; console.log(await ensureServerBuild(${setting}));`;
+  const all = await Promise.all(
+    Array.from({ length: 6 }, () => promisify(execFile)(process.execPath, ['--input-type=module', '-e', program], { encoding: 'utf8' })),
+  );
+  const folders = new Set(all.map(({ stdout }) => stdout.trim()));
+  expect(folders.size).toBe(1);
+  expect(folders.has(folder)).toBe(false);
+  expect(run([...folders][0] ?? '')).toBe('7');
 });

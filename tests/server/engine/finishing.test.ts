@@ -1,4 +1,5 @@
 import type { ProtocolDocument } from '@/shared/protocol/document';
+import { resumePlan } from '@/server/engine/remaining-plan';
 import { beats, brief, type Bench, runStart, underWay } from './rig-bench';
 
 /** A run that ends before the end of its protocol: on a whole pair, with all that comes after the pairs. */
@@ -102,7 +103,56 @@ describe('a person asks for the end after the pair', () => {
   });
 });
 
+test('where the sides of a pair stand in repeats of their own, in any order, the pair is made whole', async () => {
+  const side = (to: 'near' | 'far') => ({
+    kind: 'repeat' as const,
+    times: 1,
+    steps: [
+      { kind: 'swing' as const, to },
+      { kind: 'dwell' as const, for_s: 60 },
+    ],
+  });
+  const steps: ProtocolDocument['steps'] = [
+    { kind: 'home' },
+    { kind: 'repeat', times: 3, order: 'shuffled', steps: [side('near'), side('far')] },
+  ];
+  const bench = await underWay(2, runStart({ ...beats, steps }, { shuffleSeed: 3 }));
+  await bench.pass(600, () => bench.store.log().at(-1)?.kind === 'dwell');
+  expect(await finish(bench)).toMatchObject({ ok: true });
+  await bench.pass(600);
+  expect(bench.driver.facts()).toMatchObject({ state: 'finished', dwellsDone: 2 });
+});
+
+test('asked for while a move waits, then held: the plan of the resume is already the one that is carried out', async () => {
+  const bench = await underWay(2, runStart(night));
+  await inside(bench, '3.repeat[1].4.dwell', 0);
+  await bench.pass(1000, () => bench.driver.state().context.ahead !== null);
+  await finish(bench);
+  bench.driver.hold('Ben');
+  await bench.pass(10);
+  const plan = resumePlan(bench.start, bench.driver.state(), bench.clock.utcMs());
+  await bench.driver.resume('Ben');
+  await bench.pass(12_000);
+  expect(bench.driver.facts().state).toBe('finished');
+  expect(Math.abs((bench.driver.facts().endedAtUtcMs ?? 0) - (plan?.finishUtcMs ?? 0))).toBeLessThan(5_000);
+});
+
 describe('the night window asks', () => {
+  test('nothing is promised where nothing would be left out, or not even the pair under way would be over in time', async () => {
+    const flat = await underWay(30);
+    expect(await finish(flat, flat.clock.utcMs(), '')).toMatchObject({
+      ok: false,
+      why: expect.stringContaining('Nothing would be left out'),
+    });
+    const bench = await underWay(2, runStart(night));
+    await inside(bench, '3.repeat[1].2.dwell');
+    expect(await finish(bench, bench.clock.utcMs() + 60_000, '')).toMatchObject({
+      ok: false,
+      why: expect.stringContaining('Not even the pair under way'),
+    });
+    expect(bench.driver.facts().finishing).toBeNull();
+  });
+
   test('the pairs after which the run is over in time are made, with the way to the last station; the others are not', async () => {
     const bench = await underWay(2, runStart(night));
     await inside(bench, '3.repeat[1].2.dwell');
@@ -121,14 +171,15 @@ describe('the night window asks', () => {
   test('no pair is left out of a run that is over in time, and what somebody took back is not asked again', async () => {
     const bench = await underWay(2, runStart(night));
     await inside(bench, '3.repeat[1].2.dwell');
-    await finish(bench, (bench.driver.facts().predictedEndUtcMs ?? 0) + 60_000, '');
+    const byUtcMs = (bench.driver.facts().predictedEndUtcMs ?? 0) - 60_000;
+    expect(await finish(bench, byUtcMs, '')).toMatchObject({ ok: true });
     await bench.driver.requests.withdrawFinish('Ben');
-    expect(await finish(bench, bench.clock.utcMs(), '')).toMatchObject({ ok: false, why: expect.stringContaining('decided') });
+    expect(await finish(bench, byUtcMs, '')).toMatchObject({ ok: false, why: expect.stringContaining('decided') });
     // A person may still change their mind.
     expect(await finish(bench)).toMatchObject({ ok: true });
     const whole = await underWay(2, runStart(night));
     await inside(whole, '3.repeat[1].2.dwell');
-    await finish(whole, (whole.driver.facts().predictedEndUtcMs ?? 0) + 60_000, '');
+    expect(await finish(whole, (whole.driver.facts().predictedEndUtcMs ?? 0) + 60_000, '')).toMatchObject({ ok: false });
     await whole.pass(12_000);
     expect(whole.driver.facts()).toMatchObject({ state: 'finished', dwellsDone: 6 });
   });

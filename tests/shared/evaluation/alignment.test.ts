@@ -1,4 +1,4 @@
-import type { ClockChoice } from '@/shared/evaluation/registration';
+import type { ClockChoice } from '@/shared/evaluation/clock-choice';
 import { evaluateNight } from '../../support/evaluate-night';
 import { normalDeviates } from '../../support/lcg';
 import { alternatingAngles, type NightPlan } from '../../support/night';
