@@ -29,6 +29,9 @@ export interface PlannedStep {
   endUtcMs: number;
   angleFromDeg: number;
   angleToDeg: number;
+  /** Of moves: deg/s and deg/s2. */
+  speedDegS?: number;
+  accelerationDegS2?: number;
 }
 
 /** A row of the step log. */

@@ -1,5 +1,6 @@
 import { stepsOfLog, stepsOfPlan, type PlannedStep, type StripStep } from '@/components/charts/strip-model';
 import type { RunState, RunView, StepRowView } from '@/shared/contracts/runs';
+import { trapezoid } from '@/shared/physics/trapezoid';
 import { planTimeline } from '@/shared/protocol/timeline';
 
 /** The rest of the night as it stands now: the plan from the step that is going on, moved to where that step really ends. Pure. */
@@ -36,7 +37,24 @@ export function nightPlan(state: RunState, rows: readonly StepRowView[], items: 
   const last = rows.at(-1);
   const future = items === null || over.has(state) ? [] : futureOf(items, last ?? null, done.at(-1) ?? null);
   const planned = stepsOfPlan(future);
-  return { steps: [...done, ...planned], items: [...done.map((step) => ({ ...step, path: step.key })), ...future] };
+  const past = done.map((step, index) => ({ ...step, ...motionOf(step, rows[index]?.path, items), path: step.key }));
+  return { steps: [...done, ...planned], items: [...past, ...future] };
+}
+
+/** Where the move that is going on leads to, which its row does not tell yet. */
+function motionOf(step: StripStep, path: string | undefined, items: readonly PlannedStep[] | null): Partial<PlannedStep> {
+  const planned = step.phase === 'running' ? items?.find((item) => item.path === path) : undefined;
+  if (planned === undefined) return {};
+  const { angleToDeg, speedDegS, accelerationDegS2 } = planned;
+  return { angleToDeg, ...(speedDegS === undefined || accelerationDegS2 === undefined ? {} : { speedDegS, accelerationDegS2 }) };
+}
+
+/** A step that was cut short, as it is done again: of a move only the rest. */
+function restOf(item: PlannedStep, fromDeg: number): PlannedStep {
+  const { angleFromDeg, angleToDeg, speedDegS, accelerationDegS2, startUtcMs } = item;
+  if (angleFromDeg === angleToDeg || speedDegS === undefined || accelerationDegS2 === undefined) return item;
+  const { durationS } = trapezoid({ fromDeg, toDeg: angleToDeg, speedDegS, accelerationDegS2 });
+  return { ...item, angleFromDeg: fromDeg, endUtcMs: startUtcMs + 1000 * durationS };
 }
 
 /** A dwell begun anew after a hold has the same path twice: the newest row counts. */
@@ -46,8 +64,11 @@ function futureOf(items: readonly PlannedStep[], last: StepRowView | null, lastS
   if (at < 0) return [];
   const repeats = last.outcome === 'cut short';
   const next = repeats ? at : at + 1;
-  const first = items[next];
-  if (!first) return [];
+  const planned = items[next];
+  if (!planned) return [];
+  const first = repeats ? restOf(planned, lastStep.angleToDeg) : planned;
+  const shifted = (item: PlannedStep, byMs: number) => ({ ...item, startUtcMs: item.startUtcMs + byMs, endUtcMs: item.endUtcMs + byMs });
   const shiftMs = lastStep.endUtcMs - first.startUtcMs;
-  return items.slice(next).map((item) => ({ ...item, startUtcMs: item.startUtcMs + shiftMs, endUtcMs: item.endUtcMs + shiftMs }));
+  const savedMs = planned.endUtcMs - first.endUtcMs;
+  return [shifted(first, shiftMs), ...items.slice(next + 1).map((item) => shifted(item, shiftMs - savedMs))];
 }

@@ -1,4 +1,4 @@
-import { degrees } from '@/shared/protocol/motion-path';
+import { formatDegrees } from '@/shared/lib/format-angle';
 import { rotationHomeDeg } from '@/shared/protocol/step-parts';
 import { isWound } from '@/shared/protocol/homing';
 import { freeTurns } from '@/shared/rig/travel';
@@ -44,7 +44,7 @@ function woundWords(angleDeg: number | null, { as, beganDeg, isOut }: Wound): st
   if (angleDeg === null)
     return 'It was in a rotation, so its cables may be wound up: look at them, and turn the table back by nudges before it is homed.';
   const turns = Math.abs(angleDeg - beganDeg) / 360;
-  const stands = `The sources stand at ${degrees(angleDeg)}, ${turns.toFixed(2)} turns from where the rotation began.`;
+  const stands = `The sources stand at ${formatDegrees(angleDeg)}, ${turns.toFixed(2)} turns from where the rotation began.`;
   if (as === 'held') return `${stands} Resumed, it goes on and turns back at its end.`;
   return isOut ? `${stands} Turn them back by nudges (first move, on the link page) before the next run.` : stands;
 }

@@ -141,8 +141,15 @@ function carried(from: State, { restRad }: Segment, { omega, gamma, seconds }: {
   };
 }
 
-/** Pieces of a move short against the period: a hundred to a period, at least 8. */
-const piecesOf = (durationS: number, periodS: number) => Math.min(200, Math.max(8, Math.ceil((100 * durationS) / periodS)));
+/** Of a rotation no piece is longer, deg: the torque repeats after half a turn, with all its harmonics. */
+const pieceDeg = 6;
+const mostPieces = 6000;
+
+/** Pieces of a move short against the period: a hundred to a period, at least 8, and on a way of more than a turn short against that. */
+function piecesOf(durationS: number, periodS: number, wayDeg: number): number {
+  const pieces = Math.min(200, Math.max(8, Math.ceil((100 * durationS) / periodS)));
+  return wayDeg < 360 ? pieces : Math.min(mostPieces, Math.max(pieces, Math.ceil(wayDeg / pieceDeg)));
+}
 
 function segmentsOf(pendulum: Pendulum, { items, startUtcMs, endUtcMs }: Pick<Timeline, 'items' | 'startUtcMs' | 'endUtcMs'>): Segment[] {
   const standing = cached((angleDeg: number) => standingAt(pendulum, angleDeg));
@@ -162,7 +169,7 @@ function segmentsOf(pendulum: Pendulum, { items, startUtcMs, endUtcMs }: Pick<Ti
 /** A move as pieces, each at the angle of its middle; homing has no known profile and counts as even. */
 function addMove(item: TimelineItem, periodS: number, add: (untilMs: number, angleDeg: number) => void): void {
   const durationS = (item.endUtcMs - item.startUtcMs) / 1000;
-  const pieces = piecesOf(durationS, periodS);
+  const pieces = piecesOf(durationS, periodS, Math.abs(item.angleToDeg - item.angleFromDeg));
   const move =
     item.speedDegS === undefined || item.accelerationDegS2 === undefined
       ? null

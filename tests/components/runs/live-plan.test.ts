@@ -4,7 +4,9 @@ import { filterChoices, filterSteps, noFilter, outcomeOf } from '@/components/ru
 import type { Step } from '@/shared/protocol/document';
 import { planTimeline } from '@/shared/protocol/timeline';
 import { leverOf, spotM } from '@/shared/physics/lever';
+import type { StepRowView } from '@/shared/contracts/runs';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
+import type { RigMotion } from '@/shared/rig/document';
 import { nowUtcMs, protocol, rowsAt, startUtcMs, timeline, timeZone, viewAt } from '../fixtures/run';
 
 const view = viewAt(nowUtcMs);
@@ -34,6 +36,27 @@ test('a dwell cut short by a hold is to be done again; a run that is over has no
   const held = nightPlan('held', rows, items).steps;
   expect(held[rows.length]?.kind).toBe('dwell');
   expect(nightPlan('stopped', rows, items).steps).toHaveLength(rows.length);
+});
+
+test('a rotation that is going on leads to its end, and of one that is held only the rest is to come, then the way back', () => {
+  const rig = { ...demoRigWide, motion: { ...(demoRigWide.motion as RigMotion), turnsLimit: 2 } };
+  const steps: Step[] = [{ kind: 'rotate', period_s: 900, turns: 2 }];
+  const turning = { ...view, rig, protocol: { ...protocol, steps }, startedAt: new Date(startUtcMs).toISOString() };
+  const plan = plannedItems(turning, timeZone);
+  const [template] = rowsAt(nowUtcMs);
+  const row = { ...(template as StepRowView), kind: 'rotate' as const, path: '1.rotate.a', station: '', angleStartDeg: 0 };
+  const running = { ...row, startUtcMs, plannedEndUtcMs: startUtcMs + 1_800_200, endUtcMs: null, angleEndDeg: null, outcome: null };
+  expect(nightPlan('running', [running], plan).items[0]).toMatchObject({
+    angleFromDeg: 0,
+    angleToDeg: 720,
+    speedDegS: expect.closeTo(0.4, 4),
+  });
+  const cut = { ...running, endUtcMs: startUtcMs + 1_350_000, angleEndDeg: 540, outcome: 'cut short' as const };
+  const [, rest, back] = nightPlan('held', [cut], plan).items;
+  expect(rest).toMatchObject({ path: '1.rotate.a', angleFromDeg: 540, angleToDeg: 720 });
+  // Half a turn at 900 s a turn, and the ramps of 0.2 s.
+  expect(((rest?.endUtcMs ?? 0) - (rest?.startUtcMs ?? 0)) / 1000).toBeCloseTo(450.2, 1);
+  expect(back).toMatchObject({ path: '1.rotate.b', angleFromDeg: 720, angleToDeg: 0, startUtcMs: rest?.endUtcMs });
 });
 
 test('shuffled blocks to come are those of the run, in the order that its seed gives', () => {

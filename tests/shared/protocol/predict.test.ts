@@ -86,6 +86,7 @@ function integrated(rig: RigDocument, timeline: Timeline, stepS: number): { utcM
 
 const swing = (to: string): Step => ({ kind: 'swing', to });
 const dwell: Step = { kind: 'dwell', beat_periods: 2 };
+const still: Step = { kind: 'dwell', for_s: 900 };
 const reversals: Step[] = [
   { kind: 'home' },
   swing('near'),
@@ -94,13 +95,16 @@ const reversals: Step[] = [
 
 describe('the deflection over a timeline', () => {
   test.each([
-    ['wide', demoRigWide, 0.01],
-    ['close', demoRigNarrow, 0.02],
-  ])('follows the exact pendulum on the %s rig within a few hundredths of the step', (_, rig, share) => {
-    const timeline = planTimeline(
-      { protocol: { steps: reversals }, rig, timeZone: 'UTC' },
-      { utcMs: 0, angleDeg: rig.motion?.homeDeg ?? 0 },
-    );
+    ['reversals on the wide rig', demoRigWide, 0.01, reversals],
+    ['reversals on the close rig', demoRigNarrow, 0.02, reversals],
+    [
+      'a rotation near resonance on the wide rig',
+      demoRigWide,
+      0.05,
+      [swing('near'), { kind: 'rotate', period_s: 900, turns: 3 } as Step, still],
+    ],
+  ])('follows the exact pendulum through %s within a few hundredths of the step', (_, rig, share, steps) => {
+    const timeline = planTimeline({ protocol: { steps }, rig, timeZone: 'UTC' }, { utcMs: 0, angleDeg: rig.motion?.homeDeg ?? 0 });
     const exact = integrated(rig, timeline, 0.5);
     const predicted = predictDeflection(rig, timeline, 400);
     const signal = predictSignal(rig)?.signalRad ?? 0;
