@@ -3,6 +3,7 @@ import { formatDegrees } from '@/shared/lib/format-angle';
 import { planTimeline, type Timeline, type TimelineItem } from '@/shared/protocol/timeline';
 import type { Services } from './services';
 import { labChecks } from './start-checks-lab';
+import { nightChecks } from './start-checks-night';
 import { rigChecks } from './start-checks-rig';
 import type { StartPlan } from './start-check-parts';
 
@@ -29,6 +30,7 @@ export async function makeStartChecks(services: Services, plan: StartPlan): Prom
   const checks = [
     ...rigChecks(services, plan, { station, controller, timeline, nowUtcMs, shuffleSeed }),
     ...(await labChecks(services, plan, { station, timeline, nowUtcMs })),
+    ...(await nightChecks(services, plan, timeline)),
   ];
   return {
     checks,

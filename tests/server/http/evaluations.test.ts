@@ -50,23 +50,6 @@ async function excludes(runId: string) {
   return row;
 }
 
-test('what somebody decides about the clock of the channel is done, told as a difference from the registered evaluation, and refused where it is none', async () => {
-  const run = await rehearse({ seed: 5 });
-  const asked = await ask(run.id, { clock: { kind: 'left' } }).expect(202);
-  await ask(run.id, { clock: { kind: 'set', offset_s: 100_000 } }).expect(400);
-  await lab.services.idle();
-  await lab.advance(31_000);
-  const left = evaluationViewSchema.parse(
-    (await lab.as('viewer', 'GET', `${labPath}/evaluations/${asked.body.id as string}`).expect(200)).body,
-  );
-  expect(left.result?.alignment).toMatchObject({ applied: false, decided: { kind: 'left' } });
-  expect(left.result?.registered).toBe(false);
-  expect(left.result?.warnings).toContainEqual({
-    code: 'not-as-registered',
-    message: expect.stringContaining('clock of the channel left as it is'),
-  });
-});
-
 test('a rehearsal of the short protocol is stored like a run, and its evaluation gives back the G it was made with', async () => {
   const run = await rehearse({ seed: 3 });
   expect(run).toMatchObject({

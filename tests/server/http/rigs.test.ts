@@ -144,6 +144,24 @@ describe('start checks', () => {
     expect((await checks()).mayStart).toBe(true);
   });
 
+  test('say where a start by hand would leave the hours of the room, and leave the choice to whoever starts', async () => {
+    expect(await stateOf('room')).toBeUndefined();
+    const hours = (until: string) =>
+      lab
+        .as('keeper', 'PUT', `${rig}/hours`)
+        .send({ nightWindow: { from: '20:00', until }, blackouts: [] })
+        .expect(200);
+    await hours('23:00');
+    expect(await stateOf('room')).toMatchObject({
+      state: 'note',
+      detail: expect.stringContaining('the night window of the room is 20:00 to 23:00'),
+    });
+    expect((await checks()).mayStart).toBe(true);
+    await hours('07:00');
+    expect(await stateOf('room')).toMatchObject({ state: 'pass', detail: expect.stringContaining('within the hours of the room') });
+    await lab.as('keeper', 'PUT', `${rig}/hours`).send({ nightWindow: null, blackouts: [] }).expect(200);
+  });
+
   test('notice that the deflection has stopped', async () => {
     await database().connection.pool.query('delete from samples');
     expect(await stateOf('data')).toMatchObject({ state: 'fail', detail: 'The channel deflection has no sample yet.' });

@@ -1,0 +1,33 @@
+import type { StartCheck } from '@/shared/contracts/rigs';
+import { formatClock } from '@/shared/lib/format-time';
+import { adviseSurroundings } from '@/shared/protocol/advise-surroundings';
+import type { Timeline } from '@/shared/protocol/timeline';
+import { againstRoom } from '@/shared/schedule/room';
+import { listRigRevisions } from '../store/rigs';
+import { hoursOfRoom } from '../store/schedules';
+import type { Services } from './services';
+import { check, note, pass, type StartPlan } from './start-check-parts';
+
+/** What whoever starts by hand decides with open eyes: the hours of the room, and measured values that something has changed since. Neither keeps a run from starting. */
+export async function nightChecks({ database }: Services, plan: StartPlan, timeline: Timeline): Promise<StartCheck[]> {
+  return [...(await roomCheck(database, plan, timeline)), ...(await calibrationCheck(database, plan, timeline))];
+}
+
+type Asked<T> = (database: Services['database'], plan: StartPlan, timeline: Timeline) => Promise<T[]>;
+
+const roomCheck: Asked<StartCheck> = async ({ db }, { rig, timeZone }, { startUtcMs, endUtcMs }) => {
+  const hours = await hoursOfRoom(db, { labId: rig.labId, rigId: rig.id });
+  if (hours.nightWindow === null && hours.blackouts.length === 0) return [];
+  const against = againstRoom(hours, { startUtcMs, endUtcMs }, timeZone);
+  const outcome =
+    against === null
+      ? pass(`It would be over at ${formatClock(endUtcMs, { timeZone })}, within the hours of the room.`)
+      : note(`${against} Started all the same, it is not ended at that time by itself.`);
+  return [check('room', 'Hours of the room', outcome)];
+};
+
+const calibrationCheck: Asked<StartCheck> = async ({ db }, { rig, protocol, timeZone }, { startUtcMs, endUtcMs }) => {
+  const revisions = await listRigRevisions(db, rig.labId, rig.id);
+  const night = { protocol, startUtcMs, endUtcMs, timeZone, reverses: false };
+  return adviseSurroundings({ revisions }, night).map(({ message }) => check('calibration', 'Measured values', note(message)));
+};
