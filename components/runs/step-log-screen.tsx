@@ -67,7 +67,6 @@ function Downloads({ runId }: { runId: string }) {
   const asked = { params: { labId, runId } };
   return (
     <View className="flex-row">
-      <TextLink href={`/runs/${runId}/compare`} label="Compare" />
       <DownloadLink address={addressOf(stepsCsv, asked)} label="CSV" fileName={`steps-${runId}.csv`} testID="steps-csv" />
       <DownloadLink address={addressOf(stepsJson, asked)} label="JSON" fileName={`steps-${runId}.json`} testID="steps-json" />
     </View>
@@ -133,6 +132,7 @@ function LoggedSteps({ runId, rows, events, protocol, timeZone, first }: LoggedS
       ) : (
         <StepCards {...list} />
       )}
+      <TextLink href={`/runs/${runId}/compare`} label="Compare with another run" />
       <Panel>
         <ChainHead events={events} />
       </Panel>

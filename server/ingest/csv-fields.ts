@@ -135,7 +135,7 @@ function readCount(field: string | undefined, mapping: ImportMapping): number {
   const value = readNumber(field, mapping.decimal, 'time');
   if (mapping.timeFormat === 'epoch-s') return within(value * 1000, field);
   if (mapping.timeFormat === 'epoch-ms') return within(value, field);
-  return Date.parse(mapping.elapsedFrom ?? '') + value * 1000;
+  return within(Date.parse(mapping.elapsedFrom ?? '') + value * 1000, field);
 }
 
 const formatWords = {
@@ -151,8 +151,9 @@ const latestMs = Date.UTC(2200, 0, 1);
 function within(utcMs: number, field: string | undefined): number {
   if (utcMs >= earliestMs && utcMs < latestMs) return utcMs;
   throw new UnreadableField(
-    `the time "${short((field ?? '').trim())}" would be the year ${yearOf(utcMs)}: is the time format of the mapping right?`,
+    `the time "${short((field ?? '').trim())}" would be ${yearOf(utcMs)}: is the time format of the mapping right?`,
   );
 }
 
-const yearOf = (utcMs: number) => (Math.abs(utcMs) < 8.64e15 ? String(new Date(utcMs).getUTCFullYear()) : 'far outside the calendar');
+const yearOf = (utcMs: number) =>
+  Math.abs(utcMs) < 8.64e15 ? `the year ${String(new Date(utcMs).getUTCFullYear())}` : 'far outside the calendar';

@@ -44,7 +44,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
 
   chapter('from the step log another run of the rig is chosen', async () => {
     await hand.goes(`/runs/${first}/log`, 'step-log');
-    await hand.tapsOn('Compare', 'link');
+    await hand.tapsOn('Compare with another run', 'link');
     await hand.at('compare-screen').waitFor();
     await hand.sees(/Short night/);
     await hand.shoots('compare-choose');

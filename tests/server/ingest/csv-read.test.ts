@@ -150,6 +150,16 @@ describe('reading a deflection CSV', () => {
     });
   });
 
+  it('has a problem with elapsed time that leads out of the calendar, and with one that leads before any such measurement', async () => {
+    const mapping = { timeFormat: 'elapsed-s', elapsedFrom: '2031-03-14T22:00:00Z' } as const;
+    const reading = await read(`${header}0,1\n1.4949230677924e122,2\n-9e9,3\n`, mapping);
+    expect(reading.problems.map(({ row, message }) => [row, message])).toEqual([
+      [3, 'the time "1.4949230677924e122" would be far outside the calendar: is the time format of the mapping right?'],
+      [4, 'the time "-9e9" would be the year 1746: is the time format of the mapping right?'],
+    ]);
+    expect(reading.value).toEqual([1]);
+  });
+
   describe('local times of a zone', () => {
     const zone = { timeZone: 'Europe/Zurich' };
     const local = (times: string[]) => read(`${header}${times.map((time, index) => `${time},${String(index)}\n`).join('')}`, zone);
