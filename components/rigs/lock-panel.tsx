@@ -6,6 +6,7 @@ import { Body, Button, Check, Field, Icon, Label, Panel, ProblemNotice, Section,
 import { type RigView } from '@/shared/contracts/rigs';
 import { liftLock, overrideLock, setLock, type LockView } from '@/shared/contracts/standing';
 import { formatDayAndClock } from '@/shared/lib/format-time';
+import { VirtualInputsPanel } from './arming-progress';
 import { useRefreshRigs } from './use-rig';
 
 /** Large on every screen from which the rig could be set in motion: somebody's hands are in it. */
@@ -38,7 +39,7 @@ export function LockPanel({ rig }: { rig: RigView }) {
   const mayOverride = useMay('lock.override').ok;
   const refresh = useRefreshRigs();
   const set = useLabMutation(setLock, refresh);
-  const [leaving, setLeaving] = useState<LockView | null>(null);
+  const [leaving, setLeaving] = useState<{ lock: LockView; asOwner: boolean } | null>(null);
   const own = rig.locks.find((lock) => lock.userId === userId);
   return (
     <Section title="Personal lock">
@@ -51,7 +52,13 @@ export function LockPanel({ rig }: { rig: RigView }) {
           </Body>
         ) : (
           rig.locks.map((lock) => (
-            <LockRow key={lock.id} lock={lock} own={lock.userId === userId} mayOverride={mayOverride} onLift={() => setLeaving(lock)} />
+            <LockRow
+              key={lock.id}
+              lock={lock}
+              own={lock.userId === userId}
+              mayOverride={mayOverride}
+              onLift={(asOwner) => setLeaving({ lock, asOwner })}
+            />
           ))
         )}
         <MayNote act="lock.own" />
@@ -68,7 +75,7 @@ export function LockPanel({ rig }: { rig: RigView }) {
         ) : null}
         {set.isError ? <ProblemNotice title="The lock was not set: use the switch at the rig" {...wordsOf(set.error)} /> : null}
       </Panel>
-      {leaving === null ? null : <LiftSheet rig={rig} lock={leaving} own={leaving.userId === userId} onClose={() => setLeaving(null)} />}
+      {leaving === null ? null : <LiftSheet rig={rig} {...leaving} onClose={() => setLeaving(null)} />}
     </Section>
   );
 }
@@ -77,7 +84,7 @@ interface LockRowProps {
   lock: LockView;
   own: boolean;
   mayOverride: boolean;
-  onLift: () => void;
+  onLift: (asOwner: boolean) => void;
 }
 
 function LockRow({ lock, own, mayOverride, onLift }: LockRowProps) {
@@ -91,14 +98,14 @@ function LockRow({ lock, own, mayOverride, onLift }: LockRowProps) {
           {lock.note === '' ? '' : `: ${lock.note}`}
         </Label>
       </View>
-      {own ? <Button label="Lift my lock" onPress={onLift} testID="lift-lock" /> : null}
-      {!own && mayOverride ? <Button kind="quiet" label="Lift it as owner" onPress={onLift} testID="override-lock" /> : null}
+      {own ? <Button label="Lift my lock" onPress={() => onLift(false)} testID="lift-lock" /> : null}
+      {mayOverride ? <Button kind="quiet" label="Lift it as owner" onPress={() => onLift(true)} testID="override-lock" /> : null}
     </View>
   );
 }
 
 /** The owner of the lock says that the hands are out; an owner of the lab says why the lock of another is lifted. */
-function LiftSheet({ rig, lock, own, onClose }: { rig: RigView; lock: LockView; own: boolean; onClose: () => void }) {
+function LiftSheet({ rig, lock, asOwner, onClose }: { rig: RigView; lock: LockView; asOwner: boolean; onClose: () => void }) {
   const refresh = useRefreshRigs();
   const done = () => {
     refresh();
@@ -109,6 +116,7 @@ function LiftSheet({ rig, lock, own, onClose }: { rig: RigView; lock: LockView; 
   const [sure, setSure] = useState(false);
   const [reason, setReason] = useState('');
   const params = { rigId: rig.id, lockId: lock.id };
+  const own = !asOwner;
   const act = own ? lift : override;
   const send = () =>
     own ? lift.mutate({ params, body: { handsOut: true } }) : override.mutate({ params, body: { reason: reason.trim() } });
@@ -131,9 +139,14 @@ function LiftSheet({ rig, lock, own, onClose }: { rig: RigView; lock: LockView; 
       }
     >
       <Body>The rig stays disarmed: it moves again only after it was armed at the rig.</Body>
-      {own ? null : (
+      {own ? (
+        <>
+          <Body>Turn the arm key at the rig, on or off, at most 2 minutes before: it shows that you are there.</Body>
+          <VirtualInputsPanel rig={rig} />
+        </>
+      ) : (
         <Field
-          label="Why it is lifted by somebody else"
+          label="Why it is lifted without the key"
           value={reason}
           onChange={setReason}
           hint="Kept in the audit chain with your name."
@@ -141,7 +154,7 @@ function LiftSheet({ rig, lock, own, onClose }: { rig: RigView; lock: LockView; 
         />
       )}
       <Check
-        label={own ? 'I am at the rig, and my hands are out of it.' : `I have made sure that ${lock.name} is not at the rig.`}
+        label={own ? 'I am at the rig, and my hands are out of it.' : `I have made sure that the hands of ${lock.name} are not in the rig.`}
         value={sure}
         onChange={setSure}
         testID="lift-sure"

@@ -2,6 +2,7 @@ import { hostname, uptime } from 'node:os';
 import { join } from 'node:path';
 import type { Logger } from 'pino';
 import type { Arming } from '../engine/arming';
+import { KeyTurns } from '../engine/key-turns';
 import type { RunStart } from '@/shared/archive/run-records';
 import { endOfArm, knownAfter } from '../engine/end-of-arm';
 import { GuidedMoves } from '../engine/guided-moves';
@@ -55,6 +56,7 @@ export interface RigSideWiring {
 export interface RigSide {
   arms: MemoryArmKeeper;
   arming: Arming;
+  keyTurns: KeyTurns;
   locks: MemoryLockKeeper;
   leases: LeaseKeeper;
   stations: ServerRigStations;
@@ -122,7 +124,8 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
   });
 
   const guided = buildGuided({ clock, linkOf, arms, locks, onLine, supervisor });
-  const heed = heedLinks({ arms, arming, guided, soak }, wiring, () => clock.utcMs());
+  const keyTurns = new KeyTurns();
+  const heed = heedLinks({ arms, arming, guided, soak, keyTurns }, wiring, () => clock.utcMs());
 
   /** Two drivers on one rig would be worse than none. */
   function letGo({ rigId }: RigKey): void {
@@ -131,7 +134,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     background.add(stations.closeOne(rigId), 'closing a line');
   }
 
-  return { arms, arming, locks, leases, stations, supervisor, guided, apparatus, soak };
+  return { arms, arming, keyTurns, locks, leases, stations, supervisor, guided, apparatus, soak };
 }
 
 /** The time of each rig: one that its run keeps to. */
@@ -167,7 +170,7 @@ function buildGuided(parts: {
 
 /** What each line tells: whatever lets people or surprises into the room, or loses the position, ends the arm, run or no run. */
 function heedLinks(
-  { arms, arming, guided, soak }: Pick<RigSide, 'arms' | 'arming' | 'guided' | 'soak'>,
+  { arms, arming, guided, soak, keyTurns }: Pick<RigSide, 'arms' | 'arming' | 'guided' | 'soak' | 'keyTurns'>,
   { log, onLinkEvent }: RigSideWiring,
   nowUtcMs: () => number,
 ) {
@@ -180,6 +183,7 @@ function heedLinks(
     if (why !== null) arms.end(station, why, engineItself);
     if (event.kind === 'clock-stepped') log.warn({ rigId: station.rigId, clock: event.clock, byMs: event.byMs }, 'a clock stepped');
     soak.note(station.rigId, station.link.controller(), nowUtcMs());
+    keyTurns.heard(station.rigId, event);
     arming.heard(station.rigId, event);
     guided.heard(station.rigId, event);
     onLinkEvent(station, event, wasArmed);

@@ -44,7 +44,7 @@ import { RigTaking } from './take-rigs';
 import { createWorkerTasks } from './worker-tasks';
 
 /** What begins and ends with the server and no route needs. */
-export interface Inside extends Omit<RigSide, 'supervisor' | 'guided' | 'soak'> {
+export interface Inside extends Omit<RigSide, 'supervisor' | 'guided' | 'soak' | 'keyTurns'> {
   crew: JobCrew;
   background: Background;
   watch: AlarmWatch;
@@ -67,10 +67,9 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   const background = new Background(log);
   let awaySinceUtcMs: number | null = null;
   const nowUtcMs = () => clock.utcMs();
-  const post = createPost(parts, log);
-  const [samples, recent] = [createSampleStore(database), new RecentSamples()];
+  const [post, samples, recent] = [createPost(parts, log), createSampleStore(database), new RecentSamples()];
   const sessions = createSessions({ db: database.db, clock, newToken, sha256: sha256Hex });
-  const { arms, arming, locks, leases, stations, supervisor, guided, apparatus, soak } = buildRigSide(parts, {
+  const { arms, arming, keyTurns, locks, leases, stations, supervisor, guided, apparatus, soak } = buildRigSide(parts, {
     ...{ holder: post?.process ?? randomUUID(), log, background, samples },
     samplesOf: (rigId) => recent.readerOf(rigId),
     onLine: (rigId) => (lines.changed(rigId), told.rigChanged(rigId)),
@@ -90,7 +89,8 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
   const workers = overrides.tasks === undefined ? createWorkerTasks() : null;
   const takenUp = openPromise();
   const services: Services = {
-    ...{ clock, log, database, sessions, access, samples, stations, arms, arming, locks, supervisor, guided, soak, live, lines, newToken },
+    ...{ clock, log, database, sessions, access, samples, stations, live, lines, newToken },
+    ...{ arms, arming, keyTurns, locks, supervisor, guided, soak },
     config: { ...config, limits: { ...config.limits }, devices: { ...config.devices } },
     ...{ newId: randomUUID, sha256: sha256Hex, desk, outlook, post, arrived: told.arrived, runChanged: told.runChanged },
     ...{ reviews: new Reviews({ clock, newToken }), startSeeds: new StartSeeds({ clock, newId: randomUUID }), answers: new AnswerCounts() },

@@ -1,5 +1,6 @@
 import type { Logger } from 'pino';
 import type { Arming } from '../engine/arming';
+import type { KeyTurns } from '../engine/key-turns';
 import type { GuidedMoves } from '../engine/guided-moves';
 import type { MotorSoak } from '../engine/motor-soak';
 import type { RigSupervisor } from '../engine/rig-supervisor';
@@ -60,6 +61,7 @@ export interface Services {
   stations: RigStations;
   arms: ArmKeeper;
   arming: Arming;
+  keyTurns: KeyTurns;
   locks: LockKeeper;
   supervisor: RigSupervisor;
   guided: GuidedMoves;

@@ -106,14 +106,14 @@ export const setLock = defineRoute({
 });
 export const liftLock = defineRoute({
   name: 'liftLock',
-  summary: "Lift one's own personal lock, at the rig",
+  summary: "Lift one's own personal lock, at the rig: its arm key was turned, on or off, within the last 2 min",
   method: 'POST',
   path: `${rigPath}/locks/:lockId/lift`,
   access: 'lock.own',
   status: 204,
   idempotent: true,
   body: z.strictObject({ handsOut: z.literal(true) }),
-  problems: ['invalid-input', 'not-found', 'not-allowed'],
+  problems: ['invalid-input', 'not-found', 'not-allowed', 'not-ready'],
 });
 export const overrideLock = defineRoute({
   name: 'overrideLock',

@@ -159,6 +159,18 @@ async function lift(context: LockCaller, why: string | null): Promise<void> {
   services.locks.lifted(rig.id, params.lockId);
 }
 
+/** A lock is lifted at the rig: a turn of its arm key shows it, for a tap alone could come from anywhere. */
+function assertAtTheRig({ stations, keyTurns, clock }: Services, rig: RigRecord): void {
+  if (keyTurns.turnedLately(rig.id, clock.utcMs())) return;
+  const answers = stations.get(rig.id)?.link.health().condition === 'ready';
+  throw new ProblemError(
+    'not-ready',
+    answers
+      ? `A personal lock is lifted at the rig: turn the arm key of ${rig.name}, on or off, and lift the lock within 2 min.`
+      : `The controller of ${rig.name} does not answer, so its arm key cannot show that you are at the rig. See to the link first; an owner of the lab may lift the lock with a reason.`,
+  );
+}
+
 const setLockRoutes = [
   mount(contracts.setLock, async (context) => {
     const { body, params, me, services } = context;
@@ -172,14 +184,16 @@ const setLockRoutes = [
 
 const liftRoutes = [
   mount(contracts.liftLock, async (context) => {
-    await load(context, context.params.rigId);
+    const rig = await load(context, context.params.rigId);
     const { userId, name } = lockOf(context);
     if (userId !== context.me.userId)
       throw new ProblemError(
         'not-allowed',
         `This is the personal lock of ${name}. Only ${name} lifts it, or an owner of the lab with a reason.`,
       );
+    assertAtTheRig(context.services, rig);
     await lift(context, null);
+    context.services.keyTurns.spend(rig.id);
     return undefined;
   }),
 

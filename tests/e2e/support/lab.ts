@@ -11,9 +11,12 @@ import type { Role } from '@/shared/contracts/roles';
 import { openBrowser, type Browser, type BrowserOptions, type Size } from '../../support/browser';
 import { freshDatabase, type TestDatabase } from '../../support/database';
 import { LabServer, World } from '../../support/lab-server';
+import { withoutDatabase } from '../../support/without-database';
 import { listensAgain } from './one-address';
 
 const webDir = join(__dirname, '../../../dist');
+/** What a server takes of the clock until its lines are open, ms. */
+const beginsMs = 5_000;
 /** How often virtual time is made to follow the clock on the wall, ms. */
 const tickMs = 100;
 
@@ -21,6 +24,7 @@ interface LabParts {
   address: string;
   database: TestDatabase;
   mailbox: DemoMailbox;
+  start(): Promise<LabServer>;
   closeMail(): void;
 }
 
@@ -35,9 +39,13 @@ export class Lab {
   private tickedMs = performance.now();
 
   private constructor(
-    readonly server: LabServer,
+    private running: LabServer,
     private readonly parts: LabParts,
   ) {}
+
+  get server(): LabServer {
+    return this.running;
+  }
 
   get address(): string {
     return this.parts.address;
@@ -50,10 +58,35 @@ export class Lab {
     await seedDemo(database.connection, { nowUtcMs: world.clock.utcMs(), hashPassword, sha256: sha256Hex, link: 'simulated' });
     const mailbox = await startDemoMailbox({ folder: mkdtempSync(join(tmpdir(), 'evenfall-mail-')), clock: world.clock });
     const mail = createSmtpMail({ url: mailbox.url, from: 'Evenfall <evenfall@quillfen.example>' });
-    const server = await LabServer.start(database, { world, config: { webDir, virtualExitDelayS: 120 }, overrides: { mail } });
-    const lab = new Lab(server, { address: await listensAgain(server.built), database, mailbox, closeMail: () => mail.close() });
+    const start = () => LabServer.start(database, { world, config: { webDir, virtualExitDelayS: 120 }, overrides: { mail } });
+    const server = await start();
+    const lab = new Lab(server, { address: await listensAgain(server.built), database, mailbox, start, closeMail: () => mail.close() });
     lab.letTimeFlow();
     return lab;
+  }
+
+  /** The server ends, `seconds` go by at the rig, and another server begins at the same address. */
+  restarts(seconds: number): Promise<void> {
+    return this.inTurn(async () => {
+      const { world } = this.running;
+      await this.running.stop();
+      await this.shiftDevices(seconds * 1000);
+      await world.clock.advance(seconds * 1000);
+      this.running = await this.parts.start();
+      await this.shiftDevices(beginsMs);
+      await listensAgain(this.running.built);
+    });
+  }
+
+  /** Lets lab time pass while the database does not answer, then until it is found again. */
+  passWithoutDatabase(seconds: number, meanwhile: () => Promise<void>): Promise<void> {
+    return this.inTurn(() =>
+      withoutDatabase(this.running, async () => {
+        await this.shiftDevices(seconds * 1000);
+        await this.running.advance(seconds * 1000);
+        await meanwhile();
+      }),
+    );
   }
 
   /** Lets lab time pass at once, or until a condition holds. Open pages see their device's clock go along. */

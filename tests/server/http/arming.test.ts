@@ -197,6 +197,13 @@ describe('a personal lock', () => {
     expect((await lab.askArm().expect(409)).body.code).toBe('locked');
     // Setting one's own again is the same lock.
     expect((await set().expect(201)).body.id).toBe(lockId);
+    // A tap could come from anywhere: the key shows that somebody is there, for 2 min and for one lock.
+    const afar = await lift('keeper', lockId).expect(409);
+    expect(afar.body).toMatchObject({ code: 'not-ready', detail: expect.stringContaining('turn the arm key of') });
+    await lab.turnKey();
+    await lab.advance(121_000);
+    await lift('keeper', lockId).expect(409);
+    await lab.turnKey();
     await lift('keeper', lockId).expect(204);
     // The arm stays void: somebody has to be at the rig first.
     expect((await lab.intervene(runId, 'resume').expect(409)).body.code).toBe('not-armed');
@@ -220,8 +227,13 @@ describe('a personal lock', () => {
     });
     expect((await view()).locks.map(({ name }) => name)).toEqual([nameOf('operator')]);
     expect((await lab.askArm().expect(409)).body).toMatchObject({ code: 'locked', detail: expect.stringContaining(nameOf('operator')) });
+    await lab.turnKey();
+    const third = (await set('keeper').expect(201)).body.id as string;
     await lift('operator', two).expect(204);
     await lift('operator', two).expect(404);
+    expect((await lift('keeper', third).expect(409)).body.code).toBe('not-ready');
+    await lab.turnKey();
+    await lift('keeper', third).expect(204);
     expect((await audit())[0]).toMatchObject({ kind: 'rig.lock-lifted' });
     await lab.askArm().expect(202);
     await lab.as('operator', 'DELETE', `${rig}/arm`).expect(204);
@@ -245,10 +257,20 @@ describe('a personal lock', () => {
     await lab.stop();
     lab = await LabServer.start(database(), { world });
     expect((await view()).locks.map(({ id }) => id)).toEqual([lockId]);
+    await lab.turnKey();
     await lift('operator', lockId).expect(204);
     await lab.askArm(2).expect(202);
     const again = (await set('operator').expect(201)).body.id as string;
     expect(await view()).toMatchObject({ arming: null, disarmed: { why: 'Ilse Marrowby set a personal lock' } });
+    // A controller that does not answer cannot show that anybody is there, nor one that has restarted since.
+    await lab.turnKey();
+    lab.world.controller(demoIds.rig).unplug();
+    await lab.advance(10_000);
+    expect((await lift('operator', again).expect(409)).body.detail).toContain('does not answer');
+    lab.world.controller(demoIds.rig).plug();
+    await lab.advance(10_000);
+    await lift('operator', again).expect(409);
+    await lab.turnKey();
     await lift('operator', again).expect(204);
   });
 });

@@ -8,7 +8,7 @@ import { runSummarySchema } from '@/shared/contracts/runs';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, quickProtocol, sha256 } from '@/tests/support/lab-server';
 import { sha256Hex } from '@/server/evaluation/sha256';
-import { withoutDatabase } from './without-database';
+import { withoutDatabase } from '@/tests/support/without-database';
 
 jest.setTimeout(60_000);
 

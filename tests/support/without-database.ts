@@ -1,5 +1,5 @@
 import { setTimeout as pause } from 'node:timers/promises';
-import type { LabServer } from '@/tests/support/lab-server';
+import type { LabServer } from './lab-server';
 
 /**
  * Does `work` while the database of a lab's server does not answer, and goes on when everybody has found it again. Until then the clock goes
