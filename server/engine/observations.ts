@@ -60,7 +60,8 @@ export function noteStranger(draft: Draft): void {
 export function noteReset(draft: Draft): void {
   const { event, context } = draft;
   const bootId = event.type === 'link.ready' ? event.link.controller.bootId : draft.told('link.reset').link.bootId;
-  if (context.controller !== null) Object.assign(context.controller, { bootId, positionKnown: false, angleDeg: null, moving: false });
+  if (context.controller !== null)
+    Object.assign(context.controller, { bootId, positionKnown: false, angleDeg: null, moving: false, warningDue: true });
   forgetPosition(draft);
   draft.log('controller-reset', { bootId });
   noteGrave(draft, 'controller-reset');

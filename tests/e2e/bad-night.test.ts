@@ -1,6 +1,5 @@
 import { demoIds } from '@/db/demo/seed';
 import type { ChainedEvent } from '@/shared/archive/run-records';
-import type { StepRowView } from '@/shared/contracts/runs';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { sizes, type Size } from '../support/browser';
 import { chapters, Hand, until } from './support/hand';
@@ -106,7 +105,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.shoots('line-lost');
     await lab().pass(35);
     await hand.at('lost-notice').waitFor({ state: 'detached' });
-    await comesTo(/line to the controller/, 'line-back');
+    await comesTo(/link to the controller was lost/, 'line-back');
   });
 
   chapter('a server that restarts takes the run up again, and the page finds it by itself', async () => {
@@ -114,7 +113,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await lab().restarts(5);
     await hand.reads('link-chip', /^live/);
     await comesTo(/server/, 'server-back');
-    expect((await events()).some(({ kind }) => kind === 'taken-over' || kind === 'recovered')).toBe(true);
+    expect((await events()).some(({ kind }) => kind === 'server-restarted')).toBe(true);
   });
 
   chapter('while the database is away the masses rest, and the page goes on telling what the rig does', async () => {
@@ -127,35 +126,29 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await comesTo(/database/, 'database-back');
   });
 
-  chapter('a controller that reset is never resumed from afar: somebody arms the rig at the rig, and it homes', async () => {
+  chapter('a controller that reset is never resumed: it has lost its position, and only a new run homes', async () => {
     await passIntoDwell();
     controller().reset();
     await lab().pass(10);
     await hand.reads('run-state', 'Held');
     await hand.reads('held-notice', /controller restarted/);
     await hand.shoots('controller-reset');
-    await hand.follows(`/rigs/${demoIds.rig}`, 'rig-screen');
-    await hand.asksToArm();
-    await hand.turnsVirtualKey();
-    await lab().pass(121);
-    await hand.reads('armed-by', 'Armed by Ilse Marrowby');
-    await hand.follows(`/runs/${runId}`, 'run-screen');
-    await hand.taps('resume');
-    await hand.reads('resume-sheet', /home/i);
-    await hand.shoots('resume-after-reset');
-    await hand.keeps('resume-confirm');
-    await hand.at('resume-sheet').waitFor({ state: 'detached' });
+    expect(await hand.isEnabled('resume')).toBe(false);
+    await hand.reads('resume-why', 'this run cannot go on. Stop it, and home the rig in a new run.');
+    await hand.taps('stop');
+    await hand.at('result-screen').waitFor();
+    await hand.reads('headline', /Stopped at/);
+    await hand.shoots('ended');
   });
 
-  chapter('the night ends, its log is whole, and every interruption is in it', async () => {
-    for (let strides = 0; strides < 60 && (await stateNow()) !== 'finished'; strides += 1) await lab().pass(120);
-    await hand.at('result-screen').waitFor();
-    await hand.shoots('ended');
+  chapter('the log is whole, and every interruption is in it, each once', async () => {
     const log = await events();
     expect(log.map(({ seq }) => seq)).toEqual(log.map((_, index) => index + 1));
-    const rows = ((await read(lab(), `${runId}/steps`)) as { items: StepRowView[] }).items;
-    expect(rows.filter(({ kind, outcome }) => kind === 'dwell' && outcome === 'done').length).toBeGreaterThanOrEqual(4);
+    const kinds = log.map(({ kind }) => kind);
+    for (const kind of ['link-lost', 'server-restarted', 'database-away', 'database-back', 'controller-reset'])
+      expect([kind, kinds.filter((each) => each === kind).length]).toEqual([kind, 1]);
+    expect(kinds).not.toContain('interlock');
     await hand.goes(`/runs/${runId}/log`, 'step-log');
-    await hand.reads('chain', /whole and unchanged/);
+    await hand.reads('chain-head', `${String(log.length)} events`);
   });
 });

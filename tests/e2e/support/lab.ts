@@ -1,5 +1,6 @@
 import { mkdtempSync, readdirSync, readFileSync, rmSync } from 'node:fs';
 import { tmpdir } from 'node:os';
+import { setTimeout as pause } from 'node:timers/promises';
 import { join } from 'node:path';
 import { simpleParser, type ParsedMail } from 'mailparser';
 import { demoPeople, seedDemo } from '@/db/demo/seed';
@@ -78,13 +79,19 @@ export class Lab {
     });
   }
 
-  /** Lets lab time pass while the database does not answer, then until it is found again. */
+  /** Lets lab time pass while the database does not answer, then flow as long as somebody looks, then until it is found again. */
   passWithoutDatabase(seconds: number, meanwhile: () => Promise<void>): Promise<void> {
     return this.inTurn(() =>
       withoutDatabase(this.running, async () => {
         await this.shiftDevices(seconds * 1000);
         await this.running.advance(seconds * 1000);
-        await meanwhile();
+        let looks = true;
+        const looking = meanwhile().finally(() => (looks = false));
+        while (looks) {
+          await pause(tickMs);
+          await this.running.advance(tickMs);
+        }
+        await looking;
       }),
     );
   }

@@ -209,6 +209,7 @@ export class FakeLink implements TurntableLink {
     this.waiting = null;
     this.angleDeg = null;
     this.bootId = `${this.bootId}+`;
+    this.warningDue = true;
     this.say({ kind: 'reset', at: this.at(), bootId: this.bootId });
     this.say({ kind: 'ready', at: this.at(), controller: this.controller(), sameBoot: false });
   }

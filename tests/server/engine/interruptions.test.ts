@@ -106,6 +106,10 @@ describe('interruptions', () => {
       await bench.pass(300);
       expect(bench.driver.facts().state).toBe(state);
       expect(bench.performed).toContainEqual(expect.objectContaining({ kind: 'void-arm' }));
+      // The warning that is due after a start of the controller says nothing of the interlock.
+      const told = bench.store.events.filter(({ kind }) => kind === 'interlock' || kind === 'controller-reset');
+      expect(told.map(({ kind }) => kind)).toEqual([fault === 'interlock' ? 'interlock' : 'controller-reset']);
+      expect(bench.driver.facts().reason).toContain(fault === 'interlock' ? 'interlock was opened' : 'controller restarted');
     }
   });
 
