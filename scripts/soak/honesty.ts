@@ -1,8 +1,8 @@
-import { honestNight } from './honesty/honest-night';
+import { honestNight, nightKinds, type HonestNight } from './honesty/honest-night';
 import { soak } from './report';
 
 /**
- * Whether the uncertainty says what it claims: over 200 nights (2,000 as the second figure) whose geometry, drift, gaps, outliers and clock
+ * Whether the uncertainty says what it claims: over 200 nights of each kind (2,000 as the second figure) whose geometry, drift, gaps, outliers and clock
  * nobody knows, the true G lies in the 95 % interval in 181 to 199 of 200, and |mean of (G − true G)/u| stays below 0.22. `--nights N` looks at fewer and keeps nothing.
  */
 const FIRST = 200;
@@ -13,11 +13,24 @@ const GREATEST_MEAN = 0.22;
 soak('honesty', (args) => {
   const partial = args.includes('--nights');
   const nights = partial ? Number(args[args.indexOf('--nights') + 1]) : args.includes('--second') ? SECOND : FIRST;
-  const found = Array.from({ length: nights }, (_, k) => honestNight(k + 1));
-  const inside = found.filter((night) => night.inside).length;
-  const meanPull = found.reduce((sum, { pull }) => sum + pull, 0) / nights;
-  const rmsPull = Math.sqrt(found.reduce((sum, { pull }) => sum + pull * pull, 0) / nights);
-  const offsets = found.filter(({ result }) => result.alignment?.clockOffset_s != null).length;
-  const ok = inside >= SHARE.least * nights && inside <= SHARE.most * nights && Math.abs(meanPull) < GREATEST_MEAN;
-  return { ok: partial || ok, partial, nights, inside, meanPull, rmsPull, offsets };
+  const kinds = Object.entries(nightKinds).map(([kind, of]) => {
+    const found = Array.from({ length: nights }, (_, k) => honestNight(k + 1, of));
+    return { kind, ...of, ...figuresOf(found) };
+  });
+  const ok = kinds.every(
+    ({ inside, meanPull }) => inside >= SHARE.least * nights && inside <= SHARE.most * nights && Math.abs(meanPull) < GREATEST_MEAN,
+  );
+  return { ok: partial || ok, partial, nights, kinds };
 });
+
+function figuresOf(found: readonly HonestNight[]) {
+  const mean = (values: readonly number[]) => values.reduce((sum, value) => sum + value, 0) / values.length;
+  return {
+    inside: found.filter((night) => night.inside).length,
+    meanPull: mean(found.map(({ pull }) => pull)),
+    rmsPull: Math.sqrt(mean(found.map(({ pull }) => pull * pull))),
+    offsets: found.filter(({ result }) => result.alignment?.clockOffset_s != null).length,
+    /** Share of u(G)² that near minus far makes. */
+    reversalShare: mean(found.map(({ result }) => result.budget?.find(({ input }) => input === 'reversal_rad')?.share ?? NaN)),
+  };
+}

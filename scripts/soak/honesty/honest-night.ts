@@ -17,10 +17,25 @@ import { sha256Hex } from '@/server/evaluation/sha256';
  * people pass, and the channel's clock is wrong by an unknown amount.
  */
 
-const dwells = 12;
 const cycleS = 840;
 const rateHz = 0.2;
 const startUtcMs = Date.UTC(2026, 0, 1);
+
+export interface NightKind {
+  dwells: number;
+  /** u of lengths, masses and angles as a share of what the demo rig's document has. */
+  geometry: number;
+}
+
+/**
+ * Few dwells, enough of them to tell a zero that walks from noise (`wandering-zero.ts`), and the same on a rig measured so well that near minus far
+ * decides: then the pulls judge its u and not that of the lengths.
+ */
+export const nightKinds = {
+  few: { dwells: 12, geometry: 1 },
+  many: { dwells: 28, geometry: 1 },
+  wellMeasured: { dwells: 28, geometry: 0.02 },
+} as const satisfies Record<string, NightKind>;
 
 export interface HonestNight {
   result: EvaluationResult;
@@ -30,11 +45,11 @@ export interface HonestNight {
   inside: boolean;
 }
 
-export function honestNight(seed: number): HonestNight {
+export function honestNight(seed: number, { dwells, geometry }: NightKind): HonestNight {
   const [draw, samples] = seededStreams(seed, 2) as [GaussianSource, GaussianSource];
   // Neighbouring seeds begin alike; after a while the generator has forgotten that.
   for (let k = 0; k < 200; k += 1) draw.next();
-  const { actual, documented } = rigs(draw);
+  const { actual, documented } = rigs(draw, geometry);
   const ofStation = (rig: RigDocument, near: boolean) => rig.stations[near ? 'near' : 'far']?.value ?? 0;
   const anglesOf = (rig: RigDocument) => Array.from({ length: dwells + 1 }, (_, k) => ofStation(rig, k % 2 === 1));
   const truth = movesOf(anglesOf(actual));
@@ -71,12 +86,19 @@ function judged(result: EvaluationResult): HonestNight {
 }
 
 /** The rig as it is and as its document says. */
-function rigs(draw: GaussianSource): { actual: RigDocument; documented: RigDocument } {
+function rigs(draw: GaussianSource, geometry: number): { actual: RigDocument; documented: RigDocument } {
   const documented = structuredClone(demoRigWide);
+  for (const quantity of geometryIn(documented)) quantity.u *= geometry;
   documented.noise = { readout_rad: 5e-6, walk_rad_per_sqrt_min: 1e-6, drift_rad_per_h: 2e-5 * draw.next(), bursts_per_h: 1 };
   const actual = structuredClone(documented);
-  const { pendulum, sources, stations } = actual;
-  const drawn: (Quantity | undefined)[] = [
+  for (const quantity of geometryIn(actual)) quantity.value += quantity.u * draw.next();
+  delete documented.measured;
+  return { actual, documented };
+}
+
+/** What is measured with a rule, a balance or a circle, in the order in which it is drawn. */
+function geometryIn({ pendulum, sources, stations }: RigDocument): Quantity[] {
+  return [
     pendulum.arm,
     pendulum.ballMass,
     pendulum.ballRadius,
@@ -87,10 +109,7 @@ function rigs(draw: GaussianSource): { actual: RigDocument; documented: RigDocum
     sources.offset,
     stations.near,
     stations.far,
-  ];
-  for (const quantity of drawn) if (quantity !== undefined) quantity.value += quantity.u * draw.next();
-  delete documented.measured;
-  return { actual, documented };
+  ].filter((quantity) => quantity !== undefined);
 }
 
 type Move = ReturnType<typeof movesOf>[number];
