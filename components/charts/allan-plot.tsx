@@ -4,7 +4,7 @@ import { useTheme } from '@/components/theme';
 import type { ResidualAllanPoint } from '@/shared/evaluation/residual-allan';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { formatSignificant } from '@/shared/lib/format-number';
-import { formatUncertain } from '@/shared/lib/format-uncertain';
+import { formatExact, formatUncertain } from '@/shared/lib/format-uncertain';
 import { Axes, mapInto } from './chart-frame';
 import { pathOf } from './curve';
 import { HiddenTable } from './hidden-table';
@@ -74,7 +74,7 @@ export function AllanPlot({ points, words }: { points: readonly ResidualAllanPoi
         rows={points.map(({ tauS, deviationRad, u, whiteRad }) => [
           formatDuration(tauS),
           formatUncertain({ value: micro(deviationRad), u: micro(u), unit: 'µrad' }),
-          formatUncertain({ value: micro(whiteRad), u: null, unit: 'µrad' }),
+          formatExact({ value: micro(whiteRad), unit: 'µrad' }),
         ])}
       />
     </View>

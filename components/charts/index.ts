@@ -7,7 +7,7 @@ export { AllanPlot } from './allan-plot';
 export { BudgetBars } from './budget-bars';
 export { FitPlot } from './fit-plot';
 export { ResidualPlot } from './residual-plot';
-export { residualRms, sharedAxes, type SharedAxes } from './residuals';
+export { beyondAxes, residualRms, sharedAxes, type SharedAxes } from './residuals';
 export { ReversalPlot } from './reversal-plot';
 export { TorquePlot } from './torque-plot';
 export type { Series } from './curve';

@@ -6,7 +6,7 @@ import { inputWords, unitOfInput } from '@/shared/evaluation/input-words';
 import { monteCarloWords } from '@/shared/evaluation/monte-carlo-words';
 import type { BudgetLine, EvaluationResult } from '@/shared/evaluation/result';
 import { formatPercent, UNIT_OF_G, unitSign } from '@/shared/lib/format-number';
-import { formatUncertain, uncertainParts } from '@/shared/lib/format-uncertain';
+import { formatExact, uncertainParts } from '@/shared/lib/format-uncertain';
 import type { RigDocument } from '@/shared/rig/document';
 
 interface BudgetPanelProps {
@@ -40,7 +40,7 @@ const cell = 'py-2.5 pr-5 align-top';
 const right = `${cell} text-right`;
 
 /** Powers of ten alone, as an uncertainty of an uncertainty means nothing here. */
-const scientific = (x: number) => formatUncertain({ value: x, u: null });
+const scientific = (x: number) => formatExact({ value: x });
 
 function BudgetTable({ lines, rig }: { lines: readonly BudgetLine[]; rig: RigDocument | null }) {
   const sorted = [...lines].sort((a, b) => b.share - a.share);

@@ -1,6 +1,6 @@
 import { formatDuration } from '@/shared/lib/format-duration';
 import { formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
-import { formatUncertain } from '@/shared/lib/format-uncertain';
+import { formatExact, formatUncertain } from '@/shared/lib/format-uncertain';
 import { registeredDifferences } from '@/shared/evaluation/registered-differences';
 import { whiteUntil, type ResidualAllanPoint } from '@/shared/evaluation/residual-allan';
 import type { EvaluationResult, RegressionResult } from '@/shared/evaluation/result';
@@ -87,7 +87,7 @@ export function allanWords(points: readonly ResidualAllanPoint[]): string | null
 
 /** What a trial does to G and to its u, in words. */
 export function changeWords(now: { value: number; u: number | null }, then: { value: number; u: number | null }): string {
-  const change = `${formatUncertain({ value: then.value - now.value, u: null, unit: UNIT_OF_G }, { signed: true })} from the result`;
+  const change = `${formatExact({ value: then.value - now.value, unit: UNIT_OF_G }, { signed: true })} from the result`;
   if (now.u === null || then.u === null || now.value === 0 || then.value === 0) return change;
   const relative = (of: { value: number; u: number | null }) => formatPercent((of.u ?? 0) / Math.abs(of.value), 3);
   return `${change}; u ${relative(then)} of G instead of ${relative(now)}`;

@@ -4,7 +4,7 @@ import { Body, Label, Num, ProblemNotice } from '@/components/ui';
 import type { ListedEvaluation } from '@/shared/contracts/evaluations';
 import { compareResults, isMeasured, type ComparedValue, type ResultDifference } from '@/shared/evaluation/compare-results';
 import { formatDayAndClock } from '@/shared/lib/format-time';
-import { formatUncertain } from '@/shared/lib/format-uncertain';
+import { formatExact, formatUncertain } from '@/shared/lib/format-uncertain';
 import type { RigDocument } from '@/shared/rig/document';
 import { softwareWords } from './evaluation-words';
 
@@ -65,4 +65,4 @@ function wordsOfValue(value: ComparedValue, unit: string): string {
 }
 
 const changeWords = (change: number, unit: string): string =>
-  change === 0 ? 'in u alone' : formatUncertain({ value: change, u: null, unit }, { signed: true });
+  change === 0 ? 'in u alone' : formatExact({ value: change, unit }, { signed: true });

@@ -1,6 +1,6 @@
 import { useMemo } from 'react';
 import { Pressable, View } from 'react-native';
-import { laneOf, residualRms, ResidualPlot, sharedAxes, type Lane, type SharedAxes } from '@/components/charts';
+import { beyondAxes, laneOf, residualRms, ResidualPlot, sharedAxes, type Lane, type SharedAxes } from '@/components/charts';
 import { Label, Section } from '@/components/ui';
 import type { FitCurve } from '@/shared/evaluation/result';
 import { formatDuration } from '@/shared/lib/format-duration';
@@ -31,7 +31,7 @@ export function SideBySidePanel({ curves, selected, onSelect }: SideBySidePanelP
   return (
     <Section
       title="Dwells side by side"
-      remark={`Data minus fit, all on the same axes: ±${microrad(axes.reachRad)} over ${formatDuration(to - from)}. A tap shows the fit.`}
+      remark={`Data minus fit, all on the same axes: ±${microrad(axes.reachRad)} over ${formatDuration(to - from)}; an arrow marks what lies beyond. A tap shows the fit.`}
     >
       <View className="flex-row gap-4" testID="side-by-side">
         {columns.map((column) => (
@@ -58,12 +58,14 @@ interface SmallProps {
 
 function Small({ curve, axes, chosen, onSelect }: SmallProps) {
   const rms = microrad(residualRms(curve));
+  const beyond = beyondAxes(curve, axes);
+  const out = beyond === null ? null : `${beyond.bins} beyond, to ${microrad(beyond.farthestRad)}`;
   return (
     <View role="listitem">
       <Pressable
         role="button"
         aria-pressed={chosen}
-        aria-label={`Dwell ${curve.seq} at ${curve.station}, residual ${rms} rms: show its fit`}
+        aria-label={`Dwell ${curve.seq} at ${curve.station}, residual ${rms} rms${out === null ? '' : `, ${out}`}: show its fit`}
         onPress={() => {
           onSelect(curve.seq);
           document.querySelector('[data-testid="fit-panel"]')?.scrollIntoView({ block: 'nearest' });
@@ -75,6 +77,7 @@ function Small({ curve, axes, chosen, onSelect }: SmallProps) {
           <Label>{curve.seq}</Label>
           <Label>{rms} rms</Label>
         </View>
+        {out === null ? null : <Label tone="text">{out}</Label>}
         <ResidualPlot curve={curve} axes={axes} />
       </Pressable>
     </View>

@@ -1,6 +1,6 @@
 import { Text, View } from 'react-native';
 import { Body, Num } from '@/components/ui';
-import { spokenUncertain, uncertainParts, type Uncertain, type UncertainOptions } from '@/shared/lib/format-uncertain';
+import { spokenUncertain, uncertainParts, unknownU, type Uncertain, type UncertainOptions } from '@/shared/lib/format-uncertain';
 
 interface UncertainTextProps extends Uncertain {
   size?: 13 | 15 | 17 | 20 | 24 | 30 | 44;
@@ -23,6 +23,7 @@ export function UncertainText({ size = 15, options, testID, ...quantity }: Uncer
       <Body size={small} tone="dim">
         {parts.factor}
         {parts.unit}
+        {unknownU(quantity)}
       </Body>
     </Text>
   );
@@ -45,6 +46,7 @@ export function LargeG({ value, u, unit, testID }: Uncertain & { testID?: string
       <Body size={17} tone="dim">
         {parts.factor.trim()}
         {parts.unit}
+        {unknownU(quantity)}
       </Body>
     </View>
   );

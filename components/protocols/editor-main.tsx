@@ -22,9 +22,9 @@ interface EditorMainProps {
 
 /** Strip, figures, steps, findings: from the whole to the single step. */
 export function EditorMain({ sync, startAt, planning, restored }: EditorMainProps) {
-  const { plan, timeZone, rig } = useEditor();
+  const { plan, document, timeZone, rig } = useEditor();
   const wide = useWide();
-  const forecast = useForecast(plan, rig?.document ?? null);
+  const forecast = useForecast(plan, document, rig?.document ?? null);
   return (
     <>
       <MayNote act="protocol.write" />

@@ -1,15 +1,18 @@
 import { useDeferredValue, useMemo } from 'react';
 import { forecastNight, type NightForecast } from '@/shared/planning/night-forecast';
+import { uIsPlanned } from '@/shared/planning/planned-method';
 import { cadenceOf } from '@/shared/planning/strategies';
+import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { RigDocument } from '@/shared/rig/document';
 import type { Plan } from './plan';
 
 /** What the planned night would give, worked out anew only where its cadence or its length changed; typing stays ahead of it. */
-export function useForecast(plan: Plan | null, rig: RigDocument | null): NightForecast | null {
+export function useForecast(plan: Plan | null, document: ProtocolDocument, rig: RigDocument | null): NightForecast | null {
   const night = useMemo(() => {
-    const cadence = plan === null || rig === null || plan.timeline.truncated ? null : cadenceOf(plan.timeline, rig);
+    const told = plan !== null && rig !== null && !plan.timeline.truncated && uIsPlanned(document);
+    const cadence = told ? cadenceOf(plan.timeline, rig) : null;
     return plan === null || cadence === null ? null : JSON.stringify({ cadence, durationS: Math.round(plan.timeline.durationS) });
-  }, [plan, rig]);
+  }, [plan, document, rig]);
   const deferred = useDeferredValue(night);
   return useMemo(() => {
     if (deferred === null || rig === null) return null;

@@ -1,6 +1,7 @@
 import { parseArgs } from 'node:util';
 import { adviseNight } from '@/shared/planning/advise-night';
 import { peakExcursionRad } from '@/shared/planning/excursion';
+import { uIsPlanned } from '@/shared/planning/planned-method';
 import { predictU } from '@/shared/planning/plan-uncertainty';
 import { alternatives, cadenceOf, type Alternative } from '@/shared/planning/strategies';
 import { adviseProtocol } from '@/shared/protocol/advise';
@@ -25,7 +26,7 @@ export interface Plan {
   signal_rad: number | null;
   /** The same on the scale, m. */
   signal_m: number | null;
-  /** Of G after the night; null where the rig or the protocol does not tell. */
+  /** Of G after the night by near minus far; null where the rig or the protocol does not tell, or another method is registered (`u-not-planned`). */
   relativeU: number | null;
   u_by_source: Record<string, number> | null;
   advice: Finding[];
@@ -45,7 +46,7 @@ export function makePlan(document: ProtocolDocument, rig: RigDocument): Plan {
   const timeline = planTimeline({ protocol: document, rig, timeZone: 'UTC' }, start);
   const signal = predictSignal(rig);
   const cadence = cadenceOf(timeline, rig);
-  const predicted = cadence === null ? null : predictU(rig, cadence);
+  const predicted = cadence === null || !uIsPlanned(document) ? null : predictU(rig, cadence);
   const others = alternatives(rig, { durationS: timeline.durationS, calibrations: cadence?.calibrations ?? [] });
   const peak = peakExcursionRad(rig, timeline);
   return {

@@ -1,4 +1,5 @@
 import type { RunStart } from '@/shared/archive/run-records';
+import { uIsPlanned } from '@/shared/planning/planned-method';
 import { cadenceOf } from '@/shared/planning/strategies';
 import { predictU } from '@/shared/planning/plan-uncertainty';
 import type { LeafStep, PlannedItem } from '@/shared/protocol/cursor';
@@ -100,10 +101,10 @@ function planFrom(start: RunStart, context: RunContext, begun: Begun): Remaining
   };
 }
 
-/** The whole plan's cadence with so many dwells; null before there is a reversal, or where the rig does not tell. */
+/** The whole plan's cadence with so many dwells; null where its protocol registered a method whose u is not planned, before there is a reversal, or where the rig does not tell. */
 function expectedU(start: RunStart, done: number, inAll: number): RemainingPlan['relativeU'] {
   const timeline = planTimeline(start, { utcMs: 0, angleDeg: start.rig.motion?.homeDeg ?? 0 });
-  const cadence = cadenceOf(timeline, start.rig);
+  const cadence = uIsPlanned(start.protocol) ? cadenceOf(timeline, start.rig) : null;
   const after = (dwells: number) =>
     cadence === null || dwells < 2 ? null : (predictU(start.rig, { ...cadence, dwells })?.relativeU ?? null);
   return { soFar: after(done), atEnd: after(inAll) };

@@ -39,15 +39,17 @@ export function plotCentres(page: ReportPage, { dwells }: Pick<EvaluationResult,
   });
 }
 
-/** Near minus far at each reversal with the result and its u as a band. */
+/** Near minus far at each reversal with the result and its u as a band; without a band where u is not known. */
 export function plotReversals(page: ReportPage, { dwells, reversal_rad: mean }: EvaluationResult): void {
   const points = reversalPoints(dwells);
   if (mean === null || points.length === 0) return;
   page.plot({
     points: points.map(({ index, rad }) => ({ x: index, y: rad * milli, mark: 'disc' })),
-    band: { y: mean.value * milli, u: (mean.u ?? 0) * milli },
+    ...(mean.u === null
+      ? { lines: [{ points: [points[0]?.index ?? 1, points.length].map((x) => ({ x, y: mean.value * milli })) }] }
+      : { band: { y: mean.value * milli, u: mean.u * milli } }),
     whole: true,
-    yWords: 'near − far at each reversal, mrad; line and band: the result ± u',
+    yWords: `near − far at each reversal, mrad; ${mean.u === null ? 'line: the result, its u is not known' : 'line and band: the result ± u'}`,
     xWords: 'reversal',
   });
 }

@@ -3,8 +3,8 @@ import { driftWords, sameSamplesWords } from '@/shared/evaluation/method-words';
 import { monteCarloWords } from '@/shared/evaluation/monte-carlo-words';
 import { residualAllan } from '@/shared/evaluation/residual-allan';
 import type { EvaluationResult } from '@/shared/evaluation/result';
-import { formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
-import { formatUncertain } from '@/shared/lib/format-uncertain';
+import { formatFixed, formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
+import { formatExact, formatUncertain } from '@/shared/lib/format-uncertain';
 import type { ReportInput } from '../interfaces/report';
 import { ReportPage, wholePlotPt } from './report-page';
 import { plotAllan, plotCentres, plotFits, plotReversals } from './report-plots';
@@ -35,6 +35,7 @@ export function measurementReport(input: ReportInput, { compress = true } = {}):
   plotFits(page, input.curves);
   residualsPart(page, input);
   remarks(page, result);
+  excludedPart(page, input);
   logPart(page, input);
   return page.end();
 }
@@ -59,10 +60,15 @@ function about(page: ReportPage, { run, evaluation, frozen, result, chainHead }:
 function resultPart(page: ReportPage, { result }: ReportInput): void {
   const { G, relativeU, codata } = result;
   page.heading('Result');
-  if (G === null) return;
+  if (G === null) {
+    page.line('This run gives no G; the remarks say why.', { strong: true });
+    return;
+  }
   page.line(`G = ${ofG(G.value, G.u)}`, { strong: true, size: 14 });
   page.line(
-    `In brackets the standard uncertainty (k = 1)${relativeU === null ? '' : `, ${formatPercent(relativeU)} of G`}${G.degreesOfFreedom === null ? '' : `; ${formatSignificant(G.degreesOfFreedom, 2)} degrees of freedom`}.`,
+    G.u === null
+      ? 'No standard uncertainty can be given: too few dwells count to judge it by. This value is no result.'
+      : `In brackets the standard uncertainty (k = 1)${relativeU === null ? '' : `, ${formatPercent(relativeU)} of G`}${G.degreesOfFreedom === null ? '' : `; ${formatSignificant(G.degreesOfFreedom, 2)} degrees of freedom`}.`,
   );
   page.line(`CODATA 2022: ${ofG(codata.value, codata.u)}${codata.En === null ? '' : `; En = ${formatSignificant(codata.En, 2)}`}.`);
   const trials = monteCarloWords(result);
@@ -107,7 +113,7 @@ function budgetPart(page: ReportPage, { result: { budget }, rig }: ReportInput):
   const rows = lines.map(({ input, value, u, contribution, share }) => [
     inputWords(input),
     formatUncertain({ value, u, unit: unitOfInput(input, rig) }),
-    formatUncertain({ value: contribution, u: null, unit: UNIT_OF_G }),
+    formatExact({ value: contribution, unit: UNIT_OF_G }),
     formatPercent(share),
   ]);
   page.table([['Input', 'Value and u', 'Contribution to u(G)', 'Share'], ...rows], [0.3, 0.28, 0.3, 0.12]);
@@ -155,6 +161,22 @@ function remarks(page: ReportPage, { warnings }: EvaluationResult): void {
   if (warnings.length === 0) return;
   page.heading('Remarks');
   for (const { message } of warnings) page.line(message);
+}
+
+/** What was left out by hand, each stretch with who left it out and why: nobody has to look for it elsewhere. */
+function excludedPart(page: ReportPage, { excluded }: ReportInput): void {
+  page.heading('Excluded by hand');
+  if (excluded.length === 0) {
+    page.line('No samples were excluded by hand.');
+    return;
+  }
+  const rows = excluded.map(({ startUtcMs, endUtcMs, by, reason }) => [
+    utc(startUtcMs),
+    `${formatFixed((endUtcMs - startUtcMs) / 1000, { decimals: 0 })} s`,
+    by,
+    reason,
+  ]);
+  page.table([['From', 'Length', 'By', 'Reason'], ...rows], [0.26, 0.1, 0.2, 0.44]);
 }
 
 /** The moves and dwells, so far as the rows say when and where; the whole log is in the archive. */

@@ -1,5 +1,6 @@
 import type { ReportInput } from '../interfaces/report';
 import type { EvaluationRecord } from '../store/evaluations';
+import { exclusionsInForce } from '../store/exclusions';
 import { readEvents, readSteps } from '../store/runs-read';
 import { isoOf } from './maker';
 import { ProblemError } from './problem-error';
@@ -39,6 +40,12 @@ export async function reportInputOf(services: Services, evaluation: EvaluationRe
     result,
     curves: evaluation.curves ?? [],
     steps: await readSteps(db, { labId, runId }),
+    excluded: (await exclusionsInForce(db, { labId, runId }, evaluation.createdAt)).map(({ startUtcMs, endUtcMs, madeBy, reason }) => ({
+      startUtcMs,
+      endUtcMs,
+      by: madeBy,
+      reason,
+    })),
     chainHead: (await readEvents(db, { labId, runId }, { afterSeq: 0 })).at(-1)?.hash ?? null,
   };
 }

@@ -22,5 +22,7 @@ export interface ReportInput {
   result: EvaluationResult;
   curves: FitCurve[];
   steps: StepRow[];
+  /** Stretches whose samples this evaluation did without, earliest first. */
+  excluded: { startUtcMs: number; endUtcMs: number; by: string; reason: string }[];
   chainHead: string | null;
 }

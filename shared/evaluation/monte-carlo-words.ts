@@ -1,5 +1,5 @@
 import { formatFixed, UNIT_OF_G } from '../lib/format-number';
-import { formatUncertain, uncertainParts } from '../lib/format-uncertain';
+import { formatExact, formatUncertain, uncertainParts } from '../lib/format-uncertain';
 import type { EvaluationResult } from './result';
 
 /** What the trials found, in words: mean and standard deviation so far as there are any, and the 95 % interval. */
@@ -12,7 +12,9 @@ export function monteCarloWords({ monteCarlo, G }: Pick<EvaluationResult, 'monte
     return value + factor + unit;
   };
   const found = [
-    ...(mean === null ? [] : [formatUncertain({ value: mean, u, unit: UNIT_OF_G })]),
+    ...(mean === null
+      ? []
+      : [u === null ? formatExact({ value: mean, unit: UNIT_OF_G }) : formatUncertain({ value: mean, u, unit: UNIT_OF_G })]),
     ...(u === null ? ['no standard deviation: an input has two degrees of freedom at most, or there was one trial'] : []),
     ...(interval95 === null ? [] : [`95 % interval from ${end(interval95[0])} to ${end(interval95[1])}`]),
   ];

@@ -19,7 +19,7 @@ const noReversal: ArchiveWarning = {
 /** What a reader of the result must know of how it came about. */
 export function warningsOf(archive: Archive, analysis: Analysis, { method, clock }: EvaluationPlan): ArchiveWarning[] {
   const { free, solution, clockOffset } = analysis;
-  const warnings = [...oscillatorWarnings(free), ...clockWarnings(clockOffset, clock)];
+  const warnings = [...oscillatorWarnings(free), ...clockWarnings(clockOffset, clock, method)];
   if (method === 'modulation' && solution !== null && solution.bigG < 0)
     warnings.push({
       code: 'sign',
@@ -107,6 +107,11 @@ const greatestClockS = 0.01;
 /** So far the guards about the swings cover an offset, s. */
 const harmlessClockS = 1;
 
+const bySwings = `Shaped swings leave the pendulum nearly still, so the record hardly shows when they were. Up to ${harmlessClockS} s do no harm to G; if the clocks may differ by more, set them alike, or begin the night with three plain swings.`;
+
+const byPhase =
+  'A rotation tells it by the phase of the swing, which hangs on period and decay time as well. It does no harm to G of this method, which the size of the swing tells, whatever its phase; a kick with its ring-down before the turns tells period and decay time, and so the clock, better.';
+
 const becameOfIt = (choice: EvaluationPlan['clock']): string =>
   choice.kind === 'estimated'
     ? 'this was taken off'
@@ -114,7 +119,11 @@ const becameOfIt = (choice: EvaluationPlan['clock']): string =>
       ? 'it was left as it is, as was asked for'
       : `instead ${String(choice.offset_s)} s was taken off, as was asked for`;
 
-function clockWarnings(offset: Analysis['clockOffset'], choice: EvaluationPlan['clock']): ArchiveWarning[] {
+function clockWarnings(
+  offset: Analysis['clockOffset'],
+  choice: EvaluationPlan['clock'],
+  method: EvaluationPlan['method'],
+): ArchiveWarning[] {
   if (offset === null) return [];
   const warnings: ArchiveWarning[] = [];
   const way = `${Math.abs(offset.value).toFixed(3)} s ${offset.value > 0 ? 'later' : 'earlier'}`;
@@ -127,7 +136,7 @@ function clockWarnings(offset: Analysis['clockOffset'], choice: EvaluationPlan['
   if (2 * offset.u > harmlessClockS) {
     warnings.push({
       code: 'clock-poorly-known',
-      message: `How the channel's clock stands against the step log's is poorly known: u ${offset.u.toFixed(1)} s. Shaped swings leave the pendulum nearly still, so the record hardly shows when they were. Up to ${harmlessClockS} s do no harm to G; if the clocks may differ by more, set them alike, or begin the night with three plain swings.`,
+      message: `How the channel's clock stands against the step log's is poorly known: u ${offset.u.toFixed(1)} s. ${method === 'modulation' ? byPhase : bySwings}`,
     });
   }
   return warnings;

@@ -84,11 +84,20 @@ export function uncertainParts({ value, u, unit = '' }: Uncertain, options: Unce
   return { value: text, uncertainty: uncertaintyInBrackets(scale(usableU), decimals, sign), factor, unit: unitText };
 }
 
-/** {@link uncertainParts} as one string. */
+/** What stands behind a measured value whose u nobody knows: it is never printed as if it were exact. */
+export const unknownU = ({ value, u }: Pick<Uncertain, 'value' | 'u'>): string =>
+  u === null && Number.isFinite(value) ? ', u not known' : '';
+
+/** {@link uncertainParts} as one string; where u is not known, it says so. */
 export function formatUncertain(quantity: Uncertain, options: UncertainOptions = {}): string {
-  const parts = uncertainParts(quantity, options);
-  return parts.value + parts.uncertainty + parts.factor + parts.unit;
+  return joined(uncertainParts(quantity, options)) + unknownU(quantity);
 }
+
+/** A number that is not measured but worked out, such as a contribution to u or a change, in the same notation to four digits. */
+export const formatExact = (quantity: Omit<Uncertain, 'u'>, options: UncertainOptions = {}): string =>
+  joined(uncertainParts({ ...quantity, u: null }, options));
+
+const joined = (parts: UncertainParts): string => parts.value + parts.uncertainty + parts.factor + parts.unit;
 
 /** The same in words for a screen reader, which would read brackets and superscripts as noise. */
 export function spokenUncertain(quantity: Uncertain, options: UncertainOptions = {}): string {
@@ -100,7 +109,7 @@ export function spokenUncertain(quantity: Uncertain, options: UncertainOptions =
   const decimals = Math.min(20, Math.max(0, exponent - (usableU > 0 ? lastDecade(usableU) : 0)));
   const plusMinus = usableU > 0 ? ` plus or minus ${shifted(usableU, -exponent).toFixed(decimals)}` : '';
   const power = exponent === 0 ? '' : `, times ten to the power of ${String(exponent).replace('-', 'minus ')}`;
-  return `${plain}${plusMinus}${power}${parts.unit.replaceAll(NARROW_SPACE, ' ')}`;
+  return `${plain}${plusMinus}${power}${parts.unit.replaceAll(NARROW_SPACE, ' ')}${unknownU(quantity)}`;
 }
 
 function shifted(x: number, decades: number): number {
@@ -114,7 +123,7 @@ function shortest(value: number, options: UncertainOptions): string {
 }
 
 const PATTERN =
-  /^([+\u2212-]?[\d\u202f ]+(?:[.,][\d\u202f ]+)?)(?:\(([\d.,]+)\))?(?:[\u202f ]*×[\u202f ]*10([⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+))?(?:[\u202f ]*(\D.*))?$/u;
+  /^([+\u2212-]?[\d\u202f ]+(?:[.,][\d\u202f ]+)?)(?:\(([\d.,]+)\))?(?:[\u202f ]*×[\u202f ]*10([⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+))?(?:[\u202f ]*(\D.*?))?(?:, u not known)?$/u;
 
 /**
  * Reads what {@link formatUncertain} wrote.

@@ -9,14 +9,14 @@ export interface NightForecast {
   predicted: PredictedU;
   /** Relative u of G that the wandering of the zero makes, in `predicted.statistics`. */
   wandering: number;
-  /** Pairs from which on more of them lower u(G) by less than a twentieth; null where even many do not come so far. */
+  /** Fewest pairs that bring u(G) within 5 % of what any number of them could come to; null where even many do not come so far. */
   enoughPairs: number | null;
   /** Best of each strategy in the hours of the plan. */
   strategies: StrategyNight[];
 }
 
-/** The dwells count no more where they make less than this share of what all else leaves open: u(G) is then within 5 % of its least. */
-const littleShare = 0.32;
+/** The rule: pairs are enough when u(G) is at most so many times what it would be without any noise of the dwells. */
+const enough = 1.05;
 const mostPairs = 1024;
 
 /** Of a night of so many seconds at a cadence; null where the rig does not tell enough. */
@@ -28,7 +28,7 @@ export function forecastNight(rig: RigDocument, cadence: Cadence, durationS: num
     cadence,
     predicted,
     wandering: Math.sqrt(Math.max(0, predicted.statistics ** 2 - (still?.statistics ?? 0) ** 2)),
-    enoughPairs: fewestPairs(rig, cadence, ({ statistics, relativeU }) => statistics <= littleShare * restOf({ statistics, relativeU })),
+    enoughPairs: fewestPairs(rig, cadence, (night) => night.relativeU <= enough * restOf(night)),
     strategies: strategyNights(rig, { durationS, calibrations: cadence.calibrations }),
   };
 }

@@ -1,11 +1,44 @@
 import type { RigDocument } from '../rig/document';
 import type { ProtocolDocument, RepeatStep, SettleStep, Step, WaitStep } from './document';
+import { uIsPlanned } from '../planning/planned-method';
 import type { Finding } from './finding';
 import { walkSteps } from './step-path';
 
-/** Advice that needs no plan in time: fields that do nothing, a start that is not homed, drivers that stay on, an end that hangs on the result. */
+/** Advice that needs no plan in time: fields that do nothing, a start that is not homed, drivers that stay on, an end that hangs on the result, a u that is not told. */
 export function adviseDocument(document: ProtocolDocument, rig: RigDocument): Finding[] {
-  return [...withoutEffect(document), ...noHome(document), ...driversKept(document, rig), ...optionalStopping(document)];
+  return [
+    ...withoutEffect(document),
+    ...noHome(document),
+    ...driversKept(document, rig),
+    ...optionalStopping(document),
+    ...uNotPlanned(document),
+  ];
+}
+
+const methodNames = { period: 'the time of swing', acceleration: 'the beginnings of the dwells', modulation: 'the turns' } as const;
+
+/** What the plan says of u(G) is for near minus far by equilibria; of everything else it must say that it says nothing. */
+function uNotPlanned(document: ProtocolDocument): Finding[] {
+  const { method = 'equilibrium' } = document.evaluation ?? {};
+  const rotation = [...walkSteps(document.steps)].find(({ step }) => step.kind === 'rotate');
+  const how = 'Rehearse it on the simulated rig and evaluate that: its budget is the u to expect.';
+  if (!uIsPlanned(document) && method !== 'equilibrium')
+    return [
+      {
+        code: 'u-not-planned',
+        path: 'evaluation.method',
+        message: `No u of G by ${methodNames[method]} (${method}) is worked out beforehand. ${how}`,
+      },
+    ];
+  if (rotation?.step.kind !== 'rotate') return [];
+  const { turns } = rotation.step;
+  return [
+    {
+      code: 'u-not-planned',
+      path: rotation.path,
+      message: `What ${turns === 1 ? 'the turn' : `the ${String(turns)} turns`} of this rotation would tell of G (evaluation.method "modulation") is not worked out beforehand; a u beside the plan is that of the near and far dwells alone. ${how}`,
+    },
+  ];
 }
 
 /** Fields that the format allows and that do nothing beside the others. */

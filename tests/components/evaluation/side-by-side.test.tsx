@@ -1,5 +1,5 @@
 import { fireEvent, render, screen, within } from '@testing-library/react';
-import { residualRms, sharedAxes } from '@/components/charts';
+import { beyondAxes, residualRms, sharedAxes } from '@/components/charts';
 import { SideBySidePanel } from '@/components/evaluation/side-by-side-panel';
 import type { FitCurve } from '@/shared/evaluation/result';
 
@@ -21,13 +21,43 @@ const curves = [
 ];
 const plain = (text: string | null) => (text ?? '').replaceAll(/[\u202f\u00a0]/g, ' ');
 
-test('every dwell stands on the axes of the longest and the worst', () => {
+test('every dwell stands on the axes of the longest and of the greatest residual, where nothing stands out', () => {
   const axes = sharedAxes(curves);
   expect(axes.timeS).toEqual([0, 240]);
-  expect(axes.reachRad).toBeCloseTo(12e-6, 12);
+  expect(sharedAxes(curves.slice(0, 2)).reachRad).toBeCloseTo(2e-6, 12);
+  expect(sharedAxes([curves[0] as FitCurve, dwell(5, 'near', [4, -5, 2])]).reachRad).toBeCloseTo(5e-6, 12);
   // 3, −3, 3, −3 about zero: 3 by definition; one of −12 among five: 12/√5.
   expect(residualRms(curves[0] as FitCurve)).toBeCloseTo(3e-6, 12);
   expect(residualRms(curves[2] as FitCurve)).toBeCloseTo(12e-6 / Math.sqrt(5), 12);
+});
+
+test.each([
+  ['one bin', [3, -3, -210, 3, -3, 3]],
+  ['a whole dwell', [-190, 180, -210, 150, 200, -160]],
+])('%s that stands out flattens no other dwell: it is marked, its number in words', (_what, restUrad) => {
+  const usual = Array.from({ length: 11 }, (_, k) => dwell(2 * k + 10, k % 2 === 0 ? 'near' : 'far', [3, -3, 3, -3, 3, -3]));
+  const all = [...usual, dwell(40, 'far', restUrad)];
+  const axes = sharedAxes(all);
+  expect(axes.reachRad).toBeCloseTo(6e-6, 12);
+  expect(usual.map((curve) => beyondAxes(curve, axes))).toEqual(usual.map(() => null));
+  const bins = restUrad.filter((rest) => Math.abs(rest) > 6).length;
+  expect(beyondAxes(all.at(-1) as FitCurve, axes)).toEqual({ bins, farthestRad: expect.closeTo(-210e-6, 9) as number });
+  render(<SideBySidePanel curves={all} selected={null} onSelect={jest.fn()} />);
+  expect(plain(screen.getByText(`${bins} beyond, to −210 µrad`).textContent)).toBeTruthy();
+  expect(plain(screen.getByRole('button', { name: /^Dwell 40 / }).getAttribute('aria-label'))).toContain(
+    `${bins} beyond, to −210 µrad: show its fit`,
+  );
+});
+
+test('a side that is noisier than the other stays in sight as a whole', () => {
+  const night = Array.from({ length: 12 }, (_, k) =>
+    dwell(
+      k,
+      k % 2 === 0 ? 'near' : 'far',
+      [1, -1, 1, -1].map((sign) => sign * (k % 2 === 0 ? 2 : 9)),
+    ),
+  );
+  expect(sharedAxes(night).reachRad).toBeCloseTo(9e-6, 12);
 });
 
 test('near stands beside far, each dwell says its residual with its unit, and a tap chooses it', () => {
@@ -40,7 +70,7 @@ test('near stands beside far, each dwell says its residual with its unit, and a 
   expect(seqs('Dwells: near')).toEqual(['Dwell 6 at near, residual 1.0 µrad rms: show its fit']);
   expect(seqs('Dwells: far')).toEqual([
     'Dwell 4 at far, residual 3.0 µrad rms: show its fit',
-    'Dwell 8 at far, residual 5.4 µrad rms: show its fit',
+    'Dwell 8 at far, residual 5.4 µrad rms, 1 beyond, to −12 µrad: show its fit',
   ]);
   expect(seqs('Dwells: elsewhere')).toHaveLength(1);
   expect(screen.getByRole('button', { pressed: true }).getAttribute('aria-label')).toContain('Dwell 6');

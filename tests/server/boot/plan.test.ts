@@ -85,6 +85,18 @@ test('a file on another rig', () => {
   ]);
 });
 
+test('a method whose u is not planned has none, and says so: never that of another method', () => {
+  const dwells = pairs({ kind: 'dwell', beat_periods: 2 });
+  expect(plan(file('equilibria.json', dwells)).plan?.['relativeU']).toBeGreaterThan(0);
+  const { plan: result } = plan(file('turns.json', { ...dwells, evaluation: { method: 'modulation' } }));
+  expect(result).toMatchObject({ relativeU: null, u_by_source: null });
+  expect(result?.['advice']).toContainEqual({
+    code: 'u-not-planned',
+    path: 'evaluation.method',
+    message: expect.stringContaining('No u of G by the turns') as string,
+  });
+});
+
 test('the empty control has the spheres taken off', () => {
   expect(plan('--template', 'empty-control').plan?.['signal_rad']).toBeCloseTo(0, 15);
 });

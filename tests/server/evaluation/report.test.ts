@@ -7,11 +7,11 @@ import { wideRig, wideSourceAngleRad } from '../../support/reference-rigs';
 
 const near = (wideSourceAngleRad * 180) / Math.PI;
 
-function reportInput(): ReportInput {
+function reportInput(swings = 7): ReportInput {
   const normal = normalDeviates(5);
   const plan = {
     rig: wideRig(),
-    anglesDeg: alternatingAngles(7, near, -near),
+    anglesDeg: alternatingAngles(swings, near, -near),
     dwellS: 830,
     reading: (angle: number) => angle + 1e-6 * normal(),
   };
@@ -35,6 +35,9 @@ function reportInput(): ReportInput {
     result,
     curves,
     steps: night(plan).steps as ReportInput['steps'],
+    excluded: [
+      { startUtcMs: Date.UTC(2026, 2, 1, 23), endUtcMs: Date.UTC(2026, 2, 1, 23, 2), by: 'Ilse Marrowby', reason: 'the door was opened' },
+    ],
     chainHead: 'ab'.repeat(32),
   };
 }
@@ -85,9 +88,28 @@ test('the report tells G with its u and unit, the budget, the software and the h
     'the greatest residuals',
     'data − fit, µrad',
     'overlapping Allan deviation, µrad, with ± u; dashed: white noise',
+    'Excluded by hand',
+    '2026-03-01 23:00:00 UTC',
+    '120 s',
+    'the door was opened',
   ])
     expect(text).toContain(words);
   expect(text).not.toContain('?');
+});
+
+test('where too few dwells tell the uncertainty, every value that lacks it says so, and there is no band', async () => {
+  const input = reportInput(3);
+  expect(input.result.G?.value).toBeGreaterThan(0);
+  expect(input.result.G?.u).toBeNull();
+  const text = textOf(await measurementReport({ ...input, excluded: [] }, { compress: false }));
+  expect(text).toMatch(/G = 6\.6\d+ × 10⁻¹¹ m³ kg⁻¹ s⁻², u not known/);
+  expect(text).toContain('No standard uncertainty can be given');
+  expect(text).toMatch(/near − far\n[\d. ×⁻¹⁰³]+ rad, u not known/);
+  expect(text).toContain('line: the result, its u is not known');
+  expect(text).toContain('Only 3 dwells count');
+  expect(text).not.toContain('line and band');
+  expect(text).not.toContain('In brackets');
+  expect(text).toContain('No samples were excluded by hand.');
 });
 
 test('the same evaluation gives the same bytes', async () => {

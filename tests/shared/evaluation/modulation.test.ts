@@ -105,6 +105,16 @@ describe('with noise', () => {
     expect(noisy.modulation).toMatchObject({ turns: 5, amplitude_rad: { u: expect.any(Number) as number } });
   });
 
+  test('a clock that is poorly known is told in words of the turns, not of shaped swings', () => {
+    const unsure = structuredClone(rig);
+    Object.assign(unsure.measured?.decayTime_s as object, { u: 400 });
+    const { warnings } = evaluated({ ...base, rig: unsure, reading: (angle) => angle + 5e-6 * normal() });
+    const message = warnings.find(({ code }) => code === 'clock-poorly-known')?.message ?? '';
+    expect(message).toMatch(/poorly known: u \d+\.\d s\. A rotation tells it by the phase/);
+    expect(message).toContain('It does no harm to G of this method');
+    expect(message).not.toContain('haped swings');
+  });
+
   test('a minute of 200 µrad does no harm', () => {
     const burst = (tS: number) => (tS > 2000 && tS < 2060 ? 2e-4 : 0);
     const { value, u } = evaluated({ ...base, rig, reading: (angle, tS) => angle + burst(tS) + 5e-6 * normal() }).G as {

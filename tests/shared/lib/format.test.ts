@@ -10,7 +10,7 @@ import {
 } from '@/shared/lib/format-duration';
 import { formatFixed, formatPercent, formatSignificant, UNIT_OF_G } from '@/shared/lib/format-number';
 import { formatClock, formatClockWithZone, formatDay, formatLocalHonest, formatUtcHonest, zoneOffsetMs } from '@/shared/lib/format-time';
-import { formatUncertain, parseUncertain, spokenUncertain } from '@/shared/lib/format-uncertain';
+import { formatExact, formatUncertain, parseUncertain, spokenUncertain } from '@/shared/lib/format-uncertain';
 
 const plain = (text: string) => text.replaceAll('\u202f', ' ');
 
@@ -43,7 +43,10 @@ describe('a value with its uncertainty', () => {
 
   test('an exact value has no brackets, one without u has four digits', () => {
     expect(formatUncertain({ value: 0.5, u: 0 })).toBe('0.5');
-    expect(plain(formatUncertain({ value: 6.66812e-11, u: null }))).toBe('6.668 × 10⁻¹¹');
+    expect(plain(formatUncertain({ value: 6.66812e-11, u: null, unit: 'm' }))).toBe('6.668 × 10⁻¹¹ m, u not known');
+    expect(spokenUncertain({ value: 6.66812, u: null, unit: 'm' })).toContain('u not known');
+    expect(plain(formatExact({ value: 6.66812e-11, unit: 'm' }))).toBe('6.668 × 10⁻¹¹ m');
+    expect(parseUncertain(formatUncertain({ value: 6.66812e-11, u: null, unit: 'm' }))).toEqual({ value: 6.668e-11, u: null, unit: 'm' });
   });
 
   test('takes a decimal comma', () => {

@@ -17,13 +17,21 @@ const withWalk = (walk: number): RigDocument => ({ ...demoRigWide, noise: { read
 const after = (rig: RigDocument, pairs: number) =>
   predictU(rig, { ...cadence, dwells: 2 * pairs }) as NonNullable<ReturnType<typeof predictU>>;
 
-test('pairs are enough where one more in twenty of u(G) cannot be gained, and not one pair earlier', () => {
-  const rig = withWalk(2e-5);
-  const { enoughPairs } = forecastNight(rig, cadence, 11_500) ?? {};
-  const restOf = ({ relativeU, statistics }: { relativeU: number; statistics: number }) => Math.sqrt(relativeU ** 2 - statistics ** 2);
-  const [enough, fewer] = [after(rig, enoughPairs ?? NaN), after(rig, (enoughPairs ?? NaN) - 1)];
-  expect(enough.relativeU / restOf(enough)).toBeLessThan(1.051);
-  expect(fewer.relativeU / restOf(fewer)).toBeGreaterThan(1.05);
+test.each([2e-6, 2e-5, 5e-5])(
+  'pairs are enough where u(G) is within 5 %% of what any number of them could come to, and not one pair earlier (walk %d)',
+  (walk) => {
+    const rig = withWalk(walk);
+    const { enoughPairs } = forecastNight(rig, cadence, 11_500) ?? {};
+    const restOf = ({ relativeU, statistics }: { relativeU: number; statistics: number }) => Math.sqrt(relativeU ** 2 - statistics ** 2);
+    const [enough, fewer] = [after(rig, enoughPairs ?? NaN), after(rig, (enoughPairs ?? NaN) - 1)];
+    expect(enough.relativeU / restOf(enough)).toBeLessThanOrEqual(1.05);
+    if (enoughPairs === 1) return expect(walk).toBe(2e-6);
+    return expect(fewer.relativeU / restOf(fewer)).toBeGreaterThan(1.05);
+  },
+);
+
+test('where the zero walks so far that even a thousand pairs come not near the least u(G), none are said to be enough', () => {
+  expect(forecastNight(withWalk(1e-2), cadence, 11_500)?.enoughPairs).toBeNull();
 });
 
 test('a wanted u takes the fewest pairs that reach it, and none do where the geometry leaves more open', () => {

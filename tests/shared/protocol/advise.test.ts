@@ -123,6 +123,33 @@ test('a repeat that ends by the u it has reached: u of 20 passes is known to 16 
   expect(messageOf(50)).toContain('from 50 passes on, where u itself is known to 10 % only');
 });
 
+describe('u-not-planned', () => {
+  const rotation: Step = { kind: 'rotate', period_s: 900, turns: 10 };
+  const found = (steps: Step[], method?: 'equilibrium' | 'period' | 'acceleration' | 'modulation') =>
+    adviseProtocol({ ...document(steps), ...(method === undefined ? {} : { evaluation: { method } }) }, demoRigWide, {
+      utcMs: 0,
+      angleDeg: 0,
+    })
+      .filter(({ code }) => code === 'u-not-planned')
+      .map(({ path, message }) => `${path}: ${message}`);
+
+  test('a rotation says that the plan does not tell what its turns give, and what would', () => {
+    const [words, ...more] = found([{ kind: 'home' }, rotation, ...pairs(beat(2))]);
+    expect(words).toContain('2.rotate: What the 10 turns of this rotation would tell of G');
+    expect(words).toContain('that of the near and far dwells alone. Rehearse it');
+    expect(more).toEqual([]);
+  });
+
+  test('so does a registered method that the plan does not foresee', () => {
+    expect(found([rotation], 'modulation')).toEqual([
+      expect.stringContaining('evaluation.method: No u of G by the turns (modulation)') as string,
+    ]);
+    expect(found(pairs(beat(2)), 'period')).toEqual([expect.stringContaining('the time of swing') as string]);
+    expect(found(pairs(beat(2)), 'equilibrium')).toEqual([]);
+    expect(found(pairs(beat(2)))).toEqual([]);
+  });
+});
+
 describe('shaped-period-unknown', () => {
   const shaped: Step[] = [{ kind: 'swing', to: 'far', profile: 'shaped' }, beat(2)];
   const found = (u: number | null) => {
@@ -185,10 +212,12 @@ describe('drift-not-cancelled', () => {
 test('no built-in template pumps, nor is weak in any other way that is known here', () => {
   for (const template of templates) {
     for (const rig of template.id === 'four-station' ? [demoRigWide] : [demoRigWide, demoRigNarrow]) {
-      expect({
+      const advice = adviseProtocol(template.make(rig), rig, { utcMs: 0, angleDeg: rig.motion?.homeDeg ?? 0 });
+      // The time of swing has no u beforehand, which is no weakness of its protocol.
+      expect({ id: template.id, codes: advice.map(({ code }) => code) }).toEqual({
         id: template.id,
-        advice: adviseProtocol(template.make(rig), rig, { utcMs: 0, angleDeg: rig.motion?.homeDeg ?? 0 }),
-      }).toEqual({ id: template.id, advice: [] });
+        codes: template.id === 'time-of-swing' ? ['u-not-planned'] : [],
+      });
     }
   }
 });
