@@ -1,4 +1,5 @@
-import { importChoicesSchema, type ImportCheck, type ImportChoices, type ImportMapping, type ImportView } from '@/shared/contracts/data';
+import { importChoicesSchema, type ImportCheck, type ImportChoices, type ImportMapping } from '@/shared/contracts/data';
+import type { ImportView } from '@/shared/contracts/import-files';
 import { isTimeZone } from '@/shared/lib/is-time-zone';
 import type { MappingKey, RememberedMapping } from './remembered-mapping';
 

@@ -1,7 +1,8 @@
 import { useQueryClient } from '@tanstack/react-query';
 import { useReducer, useState } from 'react';
 import { call, labKey, useLab, wordsOf } from '@/components/api';
-import { beginImport, checkImport, commitImport, putImportContent, readSamples, type ImportChoices } from '@/shared/contracts/data';
+import { checkImport, commitImport, readSamples, type ImportChoices } from '@/shared/contracts/data';
+import { beginImport, putImportContent } from '@/shared/contracts/import-files';
 import { completeMapping, importReducer, noImport } from './import-draft';
 import { readRemembered, remember } from './remembered-mapping';
 

@@ -4,7 +4,6 @@ import {
   doublePrecision,
   foreignKey,
   index,
-  integer,
   json,
   pgTable,
   primaryKey,
@@ -12,13 +11,11 @@ import {
   text,
   uniqueIndex,
 } from 'drizzle-orm/pg-core';
-import type * as z from 'zod';
 import type { BrokerStatus, BrokerTopic } from '../../shared/contracts/brokers';
-import type { importMappingSchema, importPreviewSchema } from '../../shared/contracts/data';
 import type { GBasis } from '@/shared/evaluation/g-basis';
 import type { ClockChoice } from '../../shared/evaluation/clock-choice';
 import type { EvaluationResult, FitCurve } from '../../shared/evaluation/result';
-import { bytea, instant, key } from './columns';
+import { instant, key } from './columns';
 import { labs } from './labs';
 import { rigs } from './rigs';
 import { runs } from './runs';
@@ -149,53 +146,6 @@ export const sampleSummaries = pgTable(
     mean: doublePrecision('mean').notNull(),
   },
   (table) => [primaryKey({ columns: [table.labId, table.channelId, table.level, table.at] })],
-);
-
-export const imports = pgTable(
-  'imports',
-  {
-    labId: key('lab_id').notNull(),
-    id: key('id')
-      .notNull()
-      .default(sql`gen_random_uuid()`),
-    runId: key('run_id').notNull(),
-    fileName: text('file_name').notNull(),
-    state: text('state', { enum: ['waiting', 'received', 'stored', 'refused'] }).notNull(),
-    bytes: bigint('bytes', { mode: 'number' }).notNull().default(0),
-    /** SHA-256 (hex) of the file as sent. */
-    sha256: text('sha256'),
-    preview: json('preview').$type<z.infer<typeof importPreviewSchema>>(),
-    /** How it was read when it was stored. */
-    mapping: json('mapping').$type<z.infer<typeof importMappingSchema>>(),
-    channelId: key('channel_id'),
-    createdAt: instant('created_at').notNull(),
-    createdBy: text('created_by').notNull(),
-    storedAt: instant('stored_at'),
-  },
-  (table) => [
-    primaryKey({ columns: [table.labId, table.id] }),
-    foreignKey({ columns: [table.labId, table.runId], foreignColumns: [runs.labId, runs.id] }),
-    foreignKey({ columns: [table.labId, table.channelId], foreignColumns: [channels.labId, channels.id] }),
-    index('imports_run').on(table.labId, table.runId),
-  ],
-);
-
-/**
- * The file exactly as sent, in pieces of at most 1 MiB numbered from 0: written and read as a stream, so that memory
- * stays flat, and kept, backed up and rolled back together with the rows made from it.
- */
-export const importPieces = pgTable(
-  'import_pieces',
-  {
-    labId: key('lab_id').notNull(),
-    importId: key('import_id').notNull(),
-    number: integer('number').notNull(),
-    bytes: bytea('bytes').notNull(),
-  },
-  (table) => [
-    primaryKey({ columns: [table.labId, table.importId, table.number] }),
-    foreignKey({ columns: [table.labId, table.importId], foreignColumns: [imports.labId, imports.id] }).onDelete('cascade'),
-  ],
 );
 
 /** Stretches of runs whose samples are not evaluated. Never deleted; withdrawn once at most, then never changed (hand-written triggers). */

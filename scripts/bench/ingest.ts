@@ -5,9 +5,11 @@ import { Readable } from 'node:stream';
 import { pipeline } from 'node:stream/promises';
 import { from as copyFrom } from 'pg-copy-streams';
 import { demoIds } from '@/db/demo/seed';
+import { FolderObjects } from '@/server/boot/folder-objects';
 import { readCsv } from '@/server/ingest/csv-read';
 import { inTurns } from '@/server/ingest/receive-file';
 import { storeImport } from '@/server/store/import-commit';
+import { beginImport } from '@/server/store/import-files';
 import * as store from '@/server/store/imports';
 import { insertRun } from '@/server/store/run-store';
 import { createSampleStore } from '@/server/store/sample-store';
@@ -19,7 +21,7 @@ import { sizesOf } from './lib/sizes';
 import { growth, quantile, report } from './report';
 
 /**
- * Stores CSV files of deflection as the import does: read from the kept pieces, parsed, staged, checked in SQL, stored under the table's
+ * Stores CSV files of deflection as the import does: read from the folder of files, parsed, staged, checked in SQL, stored under the table's
  * key. The peer is PostgreSQL's own COPY of the same rows into the same table.
  */
 
@@ -76,17 +78,18 @@ const channelOf = (name: string) => ({
 });
 
 /** Keeps the file as the upload does, then measures what the commit of the import does. */
-async function ingest(database: BenchDatabase, rows: number): Promise<number> {
+async function ingest(database: BenchDatabase, folder: string, rows: number): Promise<number> {
   const { connection } = database;
-  const file = await store.beginImport(connection.db, { labId, runId, fileName: 'bench.csv', createdAt: startUtcMs, createdBy: 'bench' });
+  const file = await beginImport(connection.db, { labId, runId, fileName: 'bench.csv', createdAt: startUtcMs, createdBy: 'bench' });
   const key = { labId, importId: file.id };
-  await store.keepPieces(connection.db, key, Readable.from(csvOf(rows)));
+  const name = `import-${String(rows)}`;
+  await pipeline(Readable.from(csvOf(rows)), createWriteStream(join(folder, name)));
   const window = { fromUtcMs: startUtcMs, toUtcMs: startUtcMs + rows * intervalMs };
   const work = {
     ...key,
     channel: channelOf(`file of ${String(rows)}`),
     storedAt: startUtcMs,
-    mapping,
+    ...{ mapping, columns: ['time', 'deflection'], by: 'bench' },
     window,
     choices: { sameInstant: 'refuse' as const, among: 'refuse' as const },
   };
@@ -94,7 +97,7 @@ async function ingest(database: BenchDatabase, rows: number): Promise<number> {
   const breathe = () => new Promise<void>((resolve) => void setImmediate(resolve));
   const cost = await seconds(async () => {
     const { stored } = await storeImport(connection, work, async (staging) => {
-      const pieces = inTurns(store.readPieces(connection.db, key), breathe);
+      const pieces = inTurns(new FolderObjects(folder).read(name), breathe);
       const reading = await readCsv(pieces, { mapping, limits, take: staging.take });
       if (reading.problemCount > 0) throw new Error(reading.problems[0]?.message);
       if ((await staging.farValues(greatestSpanRad)) !== null) throw new Error('a value lies out of reach');
@@ -102,7 +105,6 @@ async function ingest(database: BenchDatabase, rows: number): Promise<number> {
     });
     if (stored !== rows) throw new Error(`${String(stored)} of ${String(rows)} rows were stored`);
   });
-  await store.dropPieces(connection.db, key);
   return cost;
 }
 
@@ -161,12 +163,12 @@ async function run(): Promise<void> {
   try {
     await withDatabase(async (database) => {
       await prepare(database);
-      await ingest(database, 19_999);
+      await ingest(database, folder, 19_999);
       const points: { size: number; cost: number }[] = [];
       for (const rows of sizes) {
         // Before and after, so that the load of a shared machine falls on both alike.
         const before = await copy(database, { rows, folder, name: 'first copy' });
-        const cost = await ingest(database, rows);
+        const cost = await ingest(database, folder, rows);
         const peer = (2 * rows) / (before + (await copy(database, { rows, folder, name: 'second copy' })));
         points.push({ size: rows, cost });
         const value = rows / cost;

@@ -3,6 +3,7 @@ import type { Clock } from '../interfaces/clock';
 import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { RunJournals } from '../interfaces/run-journal';
 import type { MailPort } from '../interfaces/mail';
+import type { ObjectStore } from '../interfaces/object-store';
 import type { OutgoingPort } from '../interfaces/outgoing';
 import type { ProcessPost } from '../interfaces/process-post';
 import type { PushPort } from '../interfaces/push';
@@ -24,6 +25,8 @@ export interface BuildOverrides {
   mail?: MailPort;
   push?: PushPort;
   outgoing?: OutgoingPort;
+  /** Where files are kept; default: as the configuration says. */
+  objects?: ObjectStore;
   log?: Logger;
   /** Heavy work without worker threads. */
   tasks?: HeavyTasks;

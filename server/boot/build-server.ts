@@ -7,6 +7,7 @@ import type { Services } from '../http/services';
 import { BrokerWatch } from '../http/work/broker-watch';
 import { heedSchedules } from '../http/work/scheduled-starts';
 import { sendSigns } from '../http/work/signs-of-life';
+import { tidyFiles } from '../http/work/tidy-files';
 import { openMqttLine } from '../ingest/mqtt-line';
 import type { Cancel } from '../interfaces/clock';
 import { startTicks, type Chore } from '../scheduler/ticks';
@@ -90,6 +91,7 @@ class Life {
     inside.tellTakenUp();
     // What could be slow comes after the rigs.
     inside.background.add(keepHouse(db, services.clock.utcMs()), 'keeping house');
+    inside.background.add(tidyFiles(services), 'tidying files');
     if (roles.includes('worker')) inside.crew.start();
     if (roles.includes('rig')) {
       inside.watch.start();
@@ -118,6 +120,7 @@ class Life {
     inside.arms.close();
     inside.locks.close();
     await inside.background.idle();
+    services.objects.close();
     await inside.leases.close();
     await services.post?.close();
   }
@@ -131,6 +134,7 @@ class Life {
     const ofWorkers = [
       { name: 'signs of life', cron: '* * * * *', work: () => sendSigns(services) },
       { name: 'keep house', cron: '7 * * * *', work: () => keepHouse(db, services.clock.utcMs()) },
+      { name: 'tidy files', cron: '17 * * * *', work: () => tidyFiles(services) },
       { name: 'anchor the audit', cron: '11 4 * * *', work: () => anchorAudit(db, { stateDir, nowUtcMs: services.clock.utcMs() }) },
     ];
     return [...(roles.includes('rig') ? ofRigs : []), ...(roles.includes('worker') ? ofWorkers : [])];

@@ -38,8 +38,9 @@ import type { BuildParts } from './build-parts';
 import { buildRigSide, type RigSide } from './build-rigs';
 import { createLog } from './create-log';
 import { knownHeads } from './audit-anchor';
-import { freeBytesAt, freeDisk } from './free-disk';
+import { freeBytesAt, freeDisks } from './free-disk';
 import { JobCrew } from './job-crew';
+import { foldersOf, objectsOf } from './objects-of';
 import { RigTaking } from './take-rigs';
 import { createWorkerTasks } from './worker-tasks';
 
@@ -94,7 +95,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     config: { ...config, limits: { ...config.limits }, devices: { ...config.devices } },
     ...{ newId: randomUUID, sha256: sha256Hex, desk, outlook, post, arrived: told.arrived, runChanged: told.runChanged },
     ...{ reviews: new Reviews({ clock, newToken }), startSeeds: new StartSeeds({ clock, newId: randomUUID }), answers: new AnswerCounts() },
-    appendRates: new AppendRates(clock, () => services.config.devices),
+    ...{ objects: overrides.objects ?? objectsOf(config), appendRates: new AppendRates(clock, () => services.config.devices) },
     idempotency: createIdempotency(database.db, nowUtcMs),
     ...buildTelling(parts, () => services.config.port),
     activeRuns: new ActiveRuns({ supervisor, onChange: told.runChanged }),
@@ -107,7 +108,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     breathe: () => new Promise((resolve) => setImmediate(resolve)),
     pokeJobs: () => (crew.poke(), told.jobsQueued()),
   };
-  const watch = new AlarmWatch({ services, paceMs: overrides.paceMs, freeDisk: () => freeDisk(config.stateDir) });
+  const watch = new AlarmWatch({ services, paceMs: overrides.paceMs, freeDisk: () => freeDisks(foldersOf(config)) });
   const crew = buildCrew(parts, services);
   const taking = new RigTaking(services, { leases, arms, locks, stations, recent });
   tellOn(services, stations, told);

@@ -1,7 +1,7 @@
 import { tmpdir } from 'node:os';
 import { join, resolve } from 'node:path';
 import * as z from 'zod';
-import { processRoles, type ProcessRole, type ServerConfig } from '../interfaces/server-config';
+import { processRoles, type ProcessRole, type S3Place, type ServerConfig } from '../interfaces/server-config';
 
 const flag = z
   .enum(['0', '1'])
@@ -14,6 +14,8 @@ const names = (text: string) =>
     .filter((name) => name !== '');
 const isRole = (name: string): name is ProcessRole => (processRoles as readonly string[]).includes(name);
 const count = (least: number, most: number, usual: number) => z.coerce.number().int().min(least).max(most).default(usual);
+
+const address = (error: string) => z.url({ protocol: /^https?$/, error }).transform((url) => url.replace(/\/+$/, ''));
 
 /** Every variable of the environment that the server reads: name, range, default. */
 const environmentSchema = z.object({
@@ -34,15 +36,22 @@ const environmentSchema = z.object({
     .transform((given) => processRoles.filter((role) => given.includes(role))),
   HOST: z.string().min(1).default('127.0.0.1'),
   PORT: count(0, 65_535, 4460),
-  EVENFALL_PUBLIC_URL: z
-    .url({ protocol: /^https?$/, error: 'must be an address such as https://balance.example' })
-    .transform((url) => url.replace(/\/+$/, ''))
-    .optional(),
+  EVENFALL_PUBLIC_URL: address('must be an address such as https://balance.example').optional(),
   EVENFALL_TRUSTED_PROXIES: count(0, 10, 0),
   EVENFALL_DEMO: flag,
   EVENFALL_VIRTUAL_EXIT_DELAY_S: count(1, 600, 120),
   EVENFALL_WATCHDOG_S: count(1, 60, 3),
   EVENFALL_STATE_DIR: z.string().min(1).default(join(tmpdir(), 'evenfall')),
+  EVENFALL_FILES_DIR: z.string().min(1).optional(),
+  EVENFALL_S3_BUCKET: z.string().min(1).optional(),
+  EVENFALL_S3_REGION: z.string().min(1).default('us-east-1'),
+  EVENFALL_S3_ENDPOINT: address('must be an address such as https://objects.example').optional(),
+  EVENFALL_S3_PREFIX: z
+    .string()
+    .regex(/^([\w.-]+\/)*$/, 'must be names with a slash after each, such as evenfall/')
+    .default(''),
+  EVENFALL_S3_KEY_ID: z.string().min(1).optional(),
+  EVENFALL_S3_SECRET: z.string().min(1).optional(),
   EVENFALL_WEB_DIR: z.string().default('dist'),
   EVENFALL_SMTP_URL: z
     .string()
@@ -56,6 +65,19 @@ const environmentSchema = z.object({
   EVENFALL_INTERVENTIONS_PER_MINUTE: count(10, 1_000_000, 600),
   EVENFALL_IMPORT_MIB: count(1, 4096, 256),
 });
+
+type Environment = z.output<typeof environmentSchema>;
+
+/** @throws ConfigError where a bucket is named and no key to it */
+function s3Of(env: Environment): S3Place | null {
+  const { EVENFALL_S3_BUCKET: bucket, EVENFALL_S3_KEY_ID: keyId, EVENFALL_S3_SECRET: secret } = env;
+  if (bucket === undefined) return null;
+  const [region, endpoint, prefix] = [env.EVENFALL_S3_REGION, env.EVENFALL_S3_ENDPOINT ?? null, env.EVENFALL_S3_PREFIX];
+  if (keyId !== undefined && secret !== undefined) return { bucket, region, endpoint, prefix, keyId, secret };
+  throw new ConfigError(
+    'The environment of the server is not right:\n  EVENFALL_S3_BUCKET: needs EVENFALL_S3_KEY_ID and EVENFALL_S3_SECRET beside it',
+  );
+}
 
 export class ConfigError extends Error {
   override readonly name = 'ConfigError';
@@ -73,6 +95,7 @@ export function readConfig(environment: Record<string, string | undefined>): Ser
     throw new ConfigError(`The environment of the server is not right:\n${lines.join('\n')}`);
   }
   const env = parsed.data;
+  const stateDir = resolve(env.EVENFALL_STATE_DIR);
   return {
     mode: env.NODE_ENV,
     roles: env.EVENFALL_ROLES,
@@ -84,7 +107,9 @@ export function readConfig(environment: Record<string, string | undefined>): Ser
     demo: env.EVENFALL_DEMO,
     virtualExitDelayS: env.EVENFALL_VIRTUAL_EXIT_DELAY_S,
     watchdogS: env.EVENFALL_WATCHDOG_S,
-    stateDir: resolve(env.EVENFALL_STATE_DIR),
+    stateDir,
+    filesDir: resolve(env.EVENFALL_FILES_DIR ?? join(stateDir, 'files')),
+    s3: s3Of(env),
     webDir: env.EVENFALL_WEB_DIR === 'none' ? null : resolve(env.EVENFALL_WEB_DIR),
     smtpUrl: env.EVENFALL_SMTP_URL ?? null,
     mailFrom: env.EVENFALL_MAIL_FROM,

@@ -10,6 +10,12 @@ export async function freeDisk(folder: string): Promise<number | null> {
   }
 }
 
+/** The least of several folders; one that is not there yet, or does not tell, does not count. */
+export async function freeDisks(folders: readonly string[]): Promise<number | null> {
+  const free = (await Promise.all(folders.map(freeDisk))).filter((part) => part !== null);
+  return free.length === 0 ? null : Math.min(...free);
+}
+
 /** Bytes that this process may still write on the disk of a folder; null likewise. */
 export const freeBytesAt = (folder: string): Promise<number | null> =>
   statfs(folder).then(

@@ -49,6 +49,7 @@ export const problemTitles: Record<ProblemCode, string> = {
   'still-running': 'The first request is still running',
   'edited-meanwhile': 'Somebody else saved meanwhile',
   'too-large': 'Too large',
+  'no-room': 'No room on the disk',
   'wrong-content-type': 'The content type is not accepted',
   'protocol-refused': 'The protocol is refused',
   'not-yet': 'This is not built yet',
@@ -59,6 +60,7 @@ export const problemTitles: Record<ProblemCode, string> = {
   'too-many-requests': 'Too many requests',
   internal: 'Something went wrong here',
   'database-away': 'The database does not answer',
+  'files-away': 'The store of files does not answer',
   'rigs-away': 'Nobody who drives the rig answers',
 };
 

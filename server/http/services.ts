@@ -10,6 +10,7 @@ import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { IdempotencyPort } from '../interfaces/idempotency';
 import type { LockKeeper } from '../interfaces/lock-keeper';
 import type { MailPort } from '../interfaces/mail';
+import type { ObjectStore } from '../interfaces/object-store';
 import type { OutgoingPort } from '../interfaces/outgoing';
 import type { LiveChange, ProcessPost } from '../interfaces/process-post';
 import type { PushPort } from '../interfaces/push';
@@ -54,6 +55,8 @@ export interface Services {
   /** How people are told, by every means. */
   tell: TellParts;
   samples: SampleStore;
+  /** Files that people brought in. */
+  objects: ObjectStore;
   /** How much each device may still append. */
   appendRates: AppendRates;
   /** Samples of a rig that have just come: for those who watch, and for the conditions of its run. */

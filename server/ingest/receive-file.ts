@@ -56,3 +56,28 @@ export async function* inTurns(chunks: AsyncIterable<Uint8Array>, breathe: () =>
     }
   }
 }
+
+const pieceBytes = 1_048_576;
+
+/** The same bytes in pieces of 1 MiB, the last one shorter. */
+export async function* inPieces(chunks: AsyncIterable<Uint8Array>): AsyncGenerator<Buffer> {
+  let pending: Uint8Array[] = [];
+  let length = 0;
+  for await (const chunk of chunks)
+    for (let from = 0; from < chunk.length;) {
+      const part = chunk.subarray(from, from + pieceBytes - length);
+      pending.push(part);
+      length += part.length;
+      from += part.length;
+      if (length < pieceBytes) continue;
+      yield Buffer.concat(pending);
+      [pending, length] = [[], 0];
+    }
+  if (length > 0) yield Buffer.concat(pending);
+}
+
+/** Lets all of it pass, with a turn for everything else after each piece. */
+export async function readAll(chunks: AsyncIterable<Uint8Array>, breathe?: () => Promise<void>): Promise<void> {
+  const pieces = chunks[Symbol.asyncIterator]();
+  while ((await pieces.next()).done !== true) await breathe?.();
+}

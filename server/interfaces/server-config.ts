@@ -2,6 +2,18 @@
 export const processRoles = ['web', 'rig', 'worker'] as const;
 export type ProcessRole = (typeof processRoles)[number];
 
+/** A bucket of S3, or of a server that speaks like it. */
+export interface S3Place {
+  bucket: string;
+  region: string;
+  /** Address of a server that is not Amazon's; null: Amazon's. */
+  endpoint: string | null;
+  /** What the names of this server's objects begin with. */
+  prefix: string;
+  keyId: string;
+  secret: string;
+}
+
 /** Everything the environment decides, read once by `server/boot/config.ts`. */
 export interface ServerConfig {
   /** `production` strips what a contract does not name from an answer; elsewhere such an answer is an error. */
@@ -24,6 +36,9 @@ export interface ServerConfig {
   watchdogS: number;
   /** Folder for what is not in the database: mails of the demo, journals. */
   stateDir: string;
+  /** Folder of the files that people brought in; not used where they are in S3. */
+  filesDir: string;
+  s3: S3Place | null;
   /** Folder of the built web application; null: none is served. */
   webDir: string | null;
   smtpUrl: string | null;

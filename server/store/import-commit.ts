@@ -15,8 +15,8 @@ import {
   type AmongStretch,
 } from './import-comparison';
 import { Staging } from './import-staging';
+import { changeImport, rememberMapping } from './import-files';
 import {
-  changeImport,
   ConflictingSamplesError,
   findNamedChannel,
   findOrMakeChannel,
@@ -149,6 +149,9 @@ export async function storeImport(
     channel: WantedChannel;
     storedAt: number;
     mapping: ImportMapping;
+    /** Names of the columns of the file, by which the mapping is found again. */
+    columns: string[];
+    by: string;
     choices: Pick<ImportChoices, 'sameInstant' | 'among'>;
     /** Where its samples lie most likely: partitions are made there beforehand. */
     window: { fromUtcMs: number; toUtcMs: number };
@@ -157,7 +160,7 @@ export async function storeImport(
   },
   read: (staging: Staging) => Promise<StagedFile>,
 ): Promise<{ channel: ChannelRecord } & StoredSum> {
-  const { labId, importId, channel: wanted, also, window, choices, ...change } = work;
+  const { labId, importId, channel: wanted, also, window, choices, mapping, storedAt } = work;
   await makeMonths(connection.db, monthsOfWindow(window));
   return connection.bulk(async (client, handle) => {
     const staging = await Staging.open(client);
@@ -168,7 +171,9 @@ export async function storeImport(
     await assertChannel(client, keyOf(channel));
     const done = await storeStaged(client, staging, { channel, choices, closeS: closeS(usualS) });
     const sum = { ...done, leftOut: leftOut + done.leftOut };
-    await changeImport(handle, { labId, importId }, { ...change, state: 'stored', channelId: channel.id });
+    await changeImport(handle, { labId, importId }, { mapping, storedAt, state: 'stored', channelId: channel.id });
+    const { rigId, name: channelName } = channel;
+    await rememberMapping(handle, { labId, rigId, channelName, columns: work.columns, mapping, usedAt: storedAt, usedBy: work.by });
     await also?.(handle, sum);
     return { channel, ...sum };
   });

@@ -1,92 +1,11 @@
 import { and, asc, eq } from 'drizzle-orm';
 import type { PoolClient } from 'pg';
-import type * as z from 'zod';
-import { channels, importPieces, imports } from '@/db/schema';
+import { channels } from '@/db/schema';
 import { timestampOfUtcMs } from '@/db/schema/columns';
-import type { importMappingSchema, importPreviewSchema } from '@/shared/contracts/data';
 import type { SampleBatch } from '../interfaces/sample-store';
 import { one, type Handle } from './database';
 
-export type ImportRecord = typeof imports.$inferSelect;
 export type ChannelRecord = typeof channels.$inferSelect;
-
-const pieceBytes = 1_048_576;
-
-export async function beginImport(
-  db: Handle,
-  file: { labId: string; runId: string; fileName: string; createdAt: number; createdBy: string },
-): Promise<ImportRecord> {
-  return one(
-    await db
-      .insert(imports)
-      .values({ ...file, state: 'waiting' })
-      .returning(),
-  );
-}
-
-export async function findImport(db: Handle, labId: string, importId: string): Promise<ImportRecord | null> {
-  const [found] = await db
-    .select()
-    .from(imports)
-    .where(and(eq(imports.labId, labId), eq(imports.id, importId)));
-  return found ?? null;
-}
-
-/** Keeps a file as it comes, piece by piece; pieces of an earlier try go first. Returns the number of bytes. */
-export async function keepPieces(db: Handle, key: { labId: string; importId: string }, chunks: AsyncIterable<Uint8Array>): Promise<number> {
-  await dropPieces(db, key);
-  let number = 0;
-  let bytes = 0;
-  let pending: Uint8Array[] = [];
-  let pendingBytes = 0;
-  const flush = async () => {
-    if (pendingBytes === 0) return;
-    await db.insert(importPieces).values({ ...key, number, bytes: Buffer.concat(pending) });
-    number += 1;
-    pending = [];
-    pendingBytes = 0;
-  };
-  for await (const chunk of chunks) {
-    for (let from = 0; from < chunk.length;) {
-      const part = chunk.subarray(from, from + pieceBytes - pendingBytes);
-      pending.push(part);
-      pendingBytes += part.length;
-      from += part.length;
-      if (pendingBytes === pieceBytes) await flush();
-    }
-    bytes += chunk.length;
-  }
-  await flush();
-  return bytes;
-}
-
-export async function dropPieces(db: Handle, key: { labId: string; importId: string }): Promise<void> {
-  await db.delete(importPieces).where(and(eq(importPieces.labId, key.labId), eq(importPieces.importId, key.importId)));
-}
-
-/** The kept file, piece by piece. */
-export async function* readPieces(db: Handle, key: { labId: string; importId: string }): AsyncGenerator<Buffer> {
-  for (let number = 0; ; number += 1) {
-    const [piece] = await db
-      .select({ bytes: importPieces.bytes })
-      .from(importPieces)
-      .where(and(eq(importPieces.labId, key.labId), eq(importPieces.importId, key.importId), eq(importPieces.number, number)));
-    if (piece === undefined) return;
-    yield piece.bytes;
-  }
-}
-
-export type ImportChange = Partial<Pick<ImportRecord, 'state' | 'bytes' | 'sha256' | 'channelId' | 'storedAt'>> & {
-  preview?: z.infer<typeof importPreviewSchema> | null;
-  mapping?: z.infer<typeof importMappingSchema>;
-};
-
-export async function changeImport(db: Handle, key: { labId: string; importId: string }, change: ImportChange): Promise<void> {
-  await db
-    .update(imports)
-    .set(change)
-    .where(and(eq(imports.labId, key.labId), eq(imports.id, key.importId)));
-}
 
 /** The samples of the file hold other values than the channel at the same instants. */
 export class ConflictingSamplesError extends Error {

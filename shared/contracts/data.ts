@@ -62,16 +62,6 @@ export const importPreviewSchema = z.strictObject({
   /** Keys of `mapping` that could not be told from the file and must be stated, for example `unit`. */
   ambiguous: z.array(z.string()),
 });
-export const importViewSchema = z.strictObject({
-  id: idSchema,
-  runId: idSchema,
-  fileName: z.string(),
-  state: z.enum(['waiting', 'received', 'stored', 'refused']),
-  bytes: z.number().int(),
-  sha256: z.string().nullable(),
-  preview: importPreviewSchema.nullable(),
-});
-export type ImportView = z.infer<typeof importViewSchema>;
 const stretchSchema = { fromAt: instantSchema, toAt: instantSchema };
 
 /** How the rows that could be read stand to the run and to what the channel of that name holds already. */
@@ -119,7 +109,7 @@ export const importCheckSchema = z.strictObject({
 export type ImportCheck = z.infer<typeof importCheckSchema>;
 
 const channelNameSchema = z.string().min(1).max(80);
-const importPath = '/labs/:labId/imports/:importId';
+export const importPath = '/labs/:labId/imports/:importId';
 
 export const listChannels = defineRoute({
   name: 'listChannels',
@@ -131,29 +121,6 @@ export const listChannels = defineRoute({
   response: z.strictObject({ items: z.array(channelViewSchema) }),
   problems: ['not-found'],
 });
-export const beginImport = defineRoute({
-  name: 'beginImport',
-  summary: 'Begin the import of a deflection file for a run',
-  method: 'POST',
-  path: '/labs/:labId/runs/:runId/imports',
-  access: 'data.import',
-  status: 201,
-  idempotent: true,
-  body: z.strictObject({ fileName: z.string().min(1).max(255) }),
-  response: importViewSchema,
-  problems: ['invalid-input', 'not-found'],
-});
-export const putImportContent = defineRoute({
-  name: 'putImportContent',
-  summary: 'Send the file; the answer shows its first rows and a guessed mapping',
-  method: 'PUT',
-  path: `${importPath}/content`,
-  access: 'data.import',
-  status: 200,
-  consumes: 'text/csv',
-  response: importViewSchema,
-  problems: ['not-found', 'too-large', 'wrong-content-type', 'unreadable-data', 'not-possible-now'],
-});
 export const checkImport = defineRoute({
   name: 'checkImport',
   summary: 'Read the whole file with a mapping, list every problem by row, compare it with what the channel holds; stores nothing',
@@ -163,7 +130,7 @@ export const checkImport = defineRoute({
   status: 200,
   body: z.strictObject({ mapping: importMappingSchema, channelName: channelNameSchema }),
   response: importCheckSchema,
-  problems: ['invalid-input', 'not-found', 'not-possible-now', 'already-exists'],
+  problems: ['invalid-input', 'not-found', 'unreadable-data', 'not-possible-now', 'already-exists', 'files-away'],
 });
 export const commitImport = defineRoute({
   name: 'commitImport',
@@ -182,7 +149,7 @@ export const commitImport = defineRoute({
     other: z.number().int(),
     leftOut: z.number().int(),
   }),
-  problems: ['invalid-input', 'not-found', 'unreadable-data', 'not-possible-now', 'already-exists'],
+  problems: ['invalid-input', 'not-found', 'unreadable-data', 'not-possible-now', 'already-exists', 'files-away'],
 });
 /** Both ends belong to the window; without one it reaches as far as the channel does. */
 const exportEndSchema = z.coerce.number().min(0).max(Date.UTC(9999, 0)).optional();

@@ -8,6 +8,7 @@ import * as doors from './doors';
 import * as evaluations from './evaluations';
 import * as exclusions from './exclusions';
 import * as goingOn from './going-on';
+import * as importFiles from './import-files';
 import * as link from './link';
 import * as morning from './morning';
 import * as people from './people';
@@ -41,6 +42,7 @@ export const routes: readonly RouteContract[] = [
   schedules,
   doors,
   data,
+  importFiles,
   devices,
   brokers,
   exclusions,

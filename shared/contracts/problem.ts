@@ -31,7 +31,9 @@ export const problemCodes = {
   'too-many-requests': 429,
   internal: 500,
   'database-away': 503,
+  'files-away': 503,
   'rigs-away': 503,
+  'no-room': 507,
 } as const;
 
 export type ProblemCode = keyof typeof problemCodes;

@@ -16,6 +16,7 @@ import type { RunState, RunView } from '@/shared/contracts/runs';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { cautionsVersion } from '@/shared/rig/cautions';
 import type { TestDatabase } from './database';
+import { MemoryObjects } from './memory-objects';
 
 export const sha256 = (text: string) => createHash('sha256').update(text).digest('hex');
 
@@ -40,7 +41,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
   demo: true,
   ...{ virtualExitDelayS: 5, watchdogS: 3 },
   stateDir: tmpdir(),
-  webDir: null,
+  ...{ webDir: null, filesDir: tmpdir(), s3: null },
   smtpUrl: null,
   mailFrom: 'Evenfall <evenfall@quillfen.example>',
   ...{ privateHosts: [], metricsPort: null, logLevel: 'silent' },
@@ -127,8 +128,7 @@ export class LabServer {
         tasks: heavyTasks,
         controllerOf: world.controllerOf,
         journals: world.journals,
-        ticks: false,
-        paceMs: 30_000,
+        ...{ ticks: false, paceMs: 30_000, objects: new MemoryObjects() },
         ...options.overrides,
       },
     });

@@ -1,16 +1,14 @@
-import type { Readable } from 'node:stream';
 import * as contracts from '@/shared/contracts/data';
-import type { ChannelView, ImportView } from '@/shared/contracts/data';
-import { sniffCsv } from '@/server/ingest/csv-sniff';
-import { UnreadableFile } from '@/server/ingest/csv-text';
-import { FileTooLarge, FileWatch } from '@/server/ingest/receive-file';
+import type { ChannelView } from '@/shared/contracts/data';
 import { storeImport, tryImport, type StoredSum } from '@/server/store/import-commit';
+import type { ImportRecord } from '@/server/store/import-files';
 import * as store from '@/server/store/imports';
 import type { Handle } from '@/server/store/database';
 import { findRig } from '@/server/store/rigs';
-import { channelsOfRun, findRun, type RunRecord } from '@/server/store/runs-read';
+import { channelsOfRun, type RunRecord } from '@/server/store/runs-read';
 import { countSamples, extremesOf } from '@/server/store/sample-summaries';
 import { enterAudit } from '../audited';
+import { loadImport, loadRun } from '../import-file';
 import { refusalOf, wantedChannel } from '../import-refusals';
 import { assertMapping, checkViewOf, readImport, type ImportReading } from '../import-steps';
 import { notFound, ProblemError } from '../problem-error';
@@ -29,67 +27,15 @@ export const channelViewOf = (channel: store.ChannelRecord): ChannelView => ({
   rateHz: channel.rateHz,
 });
 
-const importViewOf = (file: store.ImportRecord): ImportView => ({
-  id: file.id,
-  runId: file.runId,
-  fileName: file.fileName,
-  state: file.state,
-  bytes: file.bytes,
-  sha256: file.sha256,
-  preview: file.preview,
-});
-
-async function loadRun(services: Services, labId: string, runId: string): Promise<RunRecord> {
-  const run = await findRun(services.database.db, labId, runId);
-  if (run === null) throw notFound('run');
-  return run;
-}
-
-async function loadImport(services: Services, labId: string, importId: string): Promise<store.ImportRecord> {
-  const file = await store.findImport(services.database.db, labId, importId);
-  if (file === null) throw notFound('import');
-  return file;
-}
-
-function assertReceived(file: store.ImportRecord): void {
+function assertReceived(file: ImportRecord): void {
   if (file.state === 'stored')
     throw new ProblemError('not-possible-now', `${file.fileName} is stored already. Begin a new import to read it in another way.`);
   if (file.state !== 'received')
     throw new ProblemError('not-possible-now', `The content of ${file.fileName} has not arrived. Send the file first.`);
 }
 
-/** Keeps the file as it comes and looks into its first rows. */
-async function receive(services: Services, file: store.ImportRecord, content: Readable): Promise<void> {
-  const { db } = services.database;
-  const key = { labId: file.labId, importId: file.id };
-  const watch = new FileWatch(services.config.limits.importBytes);
-  try {
-    await store.keepPieces(db, key, watch.watch(content));
-    const preview = sniffCsv(watch.head(), watch.bytes <= watch.head().length);
-    await store.changeImport(db, key, { state: 'received', bytes: watch.bytes, sha256: watch.sha256(), preview });
-  } catch (error) {
-    await store.dropPieces(db, key);
-    await store.changeImport(db, key, {
-      state: error instanceof UnreadableFile ? 'refused' : 'waiting',
-      bytes: 0,
-      sha256: null,
-      preview: null,
-    });
-    if (error instanceof UnreadableFile) throw new ProblemError('unreadable-data', `${file.fileName}: ${error.message}`);
-    if (error instanceof FileTooLarge) throw tooLarge(file, services);
-    throw error;
-  }
-}
-
-function tooLarge(file: store.ImportRecord, services: Services): ProblemError {
-  return new ProblemError(
-    'too-large',
-    `${file.fileName} is larger than ${String(Math.round(services.config.limits.importBytes / 1_048_576))} MiB. Cut it into parts, or leave out columns that are not needed.`,
-  );
-}
-
 /** What the problems of a file say when it was to be stored. */
-function unreadable(file: store.ImportRecord, reading: ImportReading): ProblemError {
+function unreadable(file: ImportRecord, reading: ImportReading): ProblemError {
   const items = reading.problems.map(({ row, column, message }) => ({
     path: [row === null ? '' : `row ${String(row)}`, column ?? ''].filter((part) => part !== '').join(', '),
     message,
@@ -100,33 +46,14 @@ function unreadable(file: store.ImportRecord, reading: ImportReading): ProblemEr
   return new ProblemError('unreadable-data', `Nothing was stored. ${count} in ${file.fileName}: ${words}.`, items);
 }
 
+const namesOf = (file: ImportRecord): string[] => file.preview?.columns.map(({ name }) => name) ?? [];
+
 export const dataRoutes = [
   mount(contracts.listChannels, async ({ params, membership, services }) => {
     const { db } = services.database;
     if ((await findRig(db, membership.labId, params.rigId)) === null) throw notFound('rig');
     const channels = await store.channelsOfRig(db, membership.labId, params.rigId);
     return { items: channels.filter((channel) => channel.runId === null).map(channelViewOf) };
-  }),
-
-  mount(contracts.beginImport, async ({ params, membership, services, body, me }) => {
-    const run = await loadRun(services, membership.labId, params.runId);
-    return importViewOf(
-      await store.beginImport(services.database.db, {
-        labId: run.labId,
-        runId: run.id,
-        fileName: body.fileName,
-        createdAt: services.clock.utcMs(),
-        createdBy: me.name,
-      }),
-    );
-  }),
-
-  mount(contracts.putImportContent, async ({ params, membership, services, req }) => {
-    const file = await loadImport(services, membership.labId, params.importId);
-    if (file.state === 'stored') assertReceived(file);
-    if (Number(req.headers['content-length'] ?? 0) > services.config.limits.importBytes) throw tooLarge(file, services);
-    await receive(services, file, req);
-    return importViewOf(await loadImport(services, membership.labId, file.id));
   }),
 
   mount(contracts.checkImport, async ({ params, membership, services, body }) => {
@@ -146,7 +73,7 @@ export const dataRoutes = [
   }),
 
   mount(contracts.commitImport, async (context) => {
-    const { params, membership, services, body } = context;
+    const { params, membership, services, body, me } = context;
     const file = await loadImport(services, membership.labId, params.importId);
     assertReceived(file);
     assertMapping(body.mapping);
@@ -166,7 +93,17 @@ export const dataRoutes = [
     try {
       const done = await storeImport(
         services.database,
-        { ...key, channel, storedAt: channel.createdAt, mapping, window: windowOf(run, services), choices, also },
+        {
+          ...key,
+          channel,
+          storedAt: channel.createdAt,
+          mapping,
+          columns: namesOf(file),
+          by: me.name,
+          window: windowOf(run, services),
+          choices,
+          also,
+        },
         async (staging) => {
           const reading = await readImport(services, { file, run, mapping, choices }, staging);
           if (!reading.ok) throw unreadable(file, reading);

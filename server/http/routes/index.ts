@@ -9,6 +9,7 @@ import { deviceRoutes } from './devices';
 import { doorRoutes } from './doors';
 import { evaluationRoutes } from './evaluations';
 import { exclusionRoutes } from './exclusions';
+import { importFileRoutes } from './import-files';
 import { interventionRoutes } from './interventions';
 import { lineRoutes } from './line';
 import { liveRoutes } from './live';
@@ -36,6 +37,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...liveRoutes,
   ...scheduleRoutes,
   ...doorRoutes,
+  ...importFileRoutes,
   ...dataRoutes,
   ...sampleExportRoutes,
   ...deviceRoutes,

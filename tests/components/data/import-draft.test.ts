@@ -1,7 +1,8 @@
 import { completeMapping, importReducer, noImport, undecided, type ImportState } from '@/components/data/import-draft';
 import { columnNames, previewRows } from '@/components/data/file-preview';
 import type { RememberedMapping } from '@/components/data/remembered-mapping';
-import type { ImportCheck, ImportView } from '@/shared/contracts/data';
+import type { ImportCheck } from '@/shared/contracts/data';
+import type { ImportView } from '@/shared/contracts/import-files';
 
 const findings: ImportCheck['findings'] = {
   ...{ held: 0, fresh: 9, equal: 0, different: 0, differing: [], frozen: false, among: { rows: 0, stretches: [] } },
@@ -16,8 +17,8 @@ const imported = (ambiguous: string[]): ImportView => ({
   runId: 'run-1',
   fileName: 'night.csv',
   state: 'received',
-  bytes: 900,
-  sha256: null,
+  ...{ bytes: 900, wantedBytes: 900, changedAt: null, sha256: null },
+  ...{ createdAt: '2031-02-14T20:00:00.000Z', createdBy: 'Tam', storedAt: null, channelId: null },
   preview: {
     columns: ['time', 'spot'].map((name, index) => ({ index, name, sample: '' })),
     rows: [],

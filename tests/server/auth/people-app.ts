@@ -110,6 +110,7 @@ const testConfig = (stateDir: string, changes: Partial<ServerConfig>): ServerCon
   watchdogS: 3,
   stateDir,
   webDir: null,
+  ...{ filesDir: stateDir, s3: null },
   smtpUrl: null,
   mailFrom: 'Evenfall <evenfall@quillfen.example>',
   privateHosts: [],

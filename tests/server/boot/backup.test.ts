@@ -10,7 +10,9 @@ import { main as verifyAudit } from '@/server/boot/audit-verify';
 import { createSampleStore } from '@/server/store/sample-store';
 import { tablesOf } from '@/server/store/whole-database';
 import { freshDatabase, type TestDatabase } from '@/tests/support/database';
-import { sha256 } from '../store/rows';
+import { announceFile } from '@/server/store/files';
+import { beginImport } from '@/server/store/import-files';
+import { makeRun, runStart, sha256 } from '../store/rows';
 
 /** A lab is kept, lost, and put back from one file. */
 
@@ -31,6 +33,9 @@ beforeAll(async () => {
   mkdirSync(join(states.lab, 'journal'), { recursive: true });
   writeFileSync(join(states.lab, 'journal', 'run.jsonl'), '{"version":1}\n');
   writeFileSync(join(states.lab, 'made-again'), 'not worth keeping');
+  if (!(await makeRun(lab.connection.db, start))) throw new Error('the run was refused');
+  await keepFile('night', broughtIn);
+  await keepFile('lost', 'this one is lost');
   await anchorAudit(lab.connection.db, { stateDir: states.lab, nowUtcMs });
 });
 afterAll(async () => {
@@ -39,6 +44,23 @@ afterAll(async () => {
   rmSync(folder, { recursive: true });
 });
 
+const start = runStart(demoIds.lab, demoIds.rig);
+const broughtIn = 'time,angle\n0,1\n';
+const fileOf = (stateDir: string, name: string) => join(stateDir, 'files', 'imports', name);
+
+/** A file that an import refers to, in the folder of the lab's server. */
+async function keepFile(name: string, text: string): Promise<void> {
+  const { db } = lab.connection;
+  const bytes = Buffer.from(text);
+  await announceFile(db, { name: `imports/${name}`, bytes: bytes.length, sha256: sha256(text) }, nowUtcMs);
+  const { id } = await beginImport(db, {
+    ...{ labId: demoIds.lab, runId: start.runId, fileName: name, createdAt: nowUtcMs, createdBy: 'Tam' },
+  });
+  await db.execute(sql`update imports set object_name = ${`imports/${name}`} where id = ${id}`);
+  mkdirSync(join(states.lab, 'files', 'imports'), { recursive: true });
+  writeFileSync(fileOf(states.lab, name), bytes);
+}
+
 async function run(database: TestDatabase, stateDir: string, ...args: string[]) {
   const said = { out: '', err: '' };
   const output = { out: (text: string) => void (said.out += text), err: (text: string) => void (said.err += text) };
@@ -46,13 +68,25 @@ async function run(database: TestDatabase, stateDir: string, ...args: string[]) 
   return { code, ...said };
 }
 
+test('a file that was lost or changed does not keep all else from being kept, and is named', async () => {
+  writeFileSync(fileOf(states.lab, 'night'), broughtIn.replace('1', '2'));
+  rmSync(fileOf(states.lab, 'lost'));
+  const said = await run(lab, states.lab, 'backup', file);
+  expect(said).toMatchObject({ code: 2, err: expect.stringContaining('could not be read whole: imports/lost, imports/night') });
+  expect(JSON.parse(said.out)).toMatchObject({ files: 0 });
+  writeFileSync(fileOf(states.lab, 'night'), broughtIn);
+  writeFileSync(fileOf(states.lab, 'lost'), 'this one is lost');
+});
+
 test('a backup is one file for its owner alone', async () => {
-  expect(await run(lab, states.lab, 'backup', file)).toMatchObject({ code: 0, err: '' });
+  const said = await run(lab, states.lab, 'backup', file);
+  expect(said).toMatchObject({ code: 0, err: '' });
+  expect(JSON.parse(said.out)).toMatchObject({ files: 2 });
   expect(statSync(file).mode & 0o777).toBe(0o600);
   expect(await run(lab, states.lab, 'backup')).toMatchObject({ code: 2, err: expect.stringContaining('Usage') });
 });
 
-test('it is put back into an empty database: every row, the journals and heads, the audit chain whole', async () => {
+test('it is put back into an empty database: every row, the files that were brought in, the journals and heads, the audit chain whole', async () => {
   const before = await tablesOf(lab.connection.db);
   const server = connect({ url: other.url, maxConnections: 1 });
   await server.db.execute(sql`select 1`);
@@ -71,6 +105,8 @@ test('it is put back into an empty database: every row, the journals and heads, 
   await again.close();
   expect(readFileSync(join(states.other, 'journal', 'run.jsonl'), 'utf8')).toBe('{"version":1}\n');
   expect(() => statSync(join(states.other, 'made-again'))).toThrow();
+  expect(readFileSync(fileOf(states.other, 'night'), 'utf8')).toBe(broughtIn);
+  expect(statSync(fileOf(states.other, 'night')).mode & 0o777).toBe(0o600);
   const silent = { out: () => undefined, err: () => undefined };
   expect(await verifyAudit({ DATABASE_URL: other.url, EVENFALL_STATE_DIR: states.other }, silent)).toBe(0);
 });

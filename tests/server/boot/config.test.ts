@@ -16,6 +16,19 @@ test('one variable is enough; the rest has defaults', () => {
   });
 });
 
+test('files lie in the state folder, in a folder of their own, or in a bucket with its key', () => {
+  expect(readConfig({ ...least, EVENFALL_STATE_DIR: '/srv/evenfall' })).toMatchObject({ filesDir: '/srv/evenfall/files', s3: null });
+  expect(readConfig({ ...least, EVENFALL_FILES_DIR: '/srv/files' }).filesDir).toBe('/srv/files');
+  const bucket = { ...least, EVENFALL_S3_BUCKET: 'nights', EVENFALL_S3_ENDPOINT: 'https://objects.quillfen.example/' };
+  const key = { EVENFALL_S3_KEY_ID: 'id', EVENFALL_S3_SECRET: 'secret' };
+  expect(readConfig({ ...bucket, ...key, EVENFALL_S3_PREFIX: 'lab/' }).s3).toEqual({
+    ...{ bucket: 'nights', region: 'us-east-1', endpoint: 'https://objects.quillfen.example', prefix: 'lab/' },
+    ...{ keyId: 'id', secret: 'secret' },
+  });
+  expect(() => readConfig(bucket)).toThrow('EVENFALL_S3_BUCKET: needs EVENFALL_S3_KEY_ID and EVENFALL_S3_SECRET beside it');
+  expect(() => readConfig({ ...bucket, ...key, EVENFALL_S3_PREFIX: '/lab' })).toThrow('EVENFALL_S3_PREFIX: must be names with a slash');
+});
+
 test('an empty variable counts as absent, an address loses its last slash', () => {
   expect(readConfig({ ...least, PORT: '', EVENFALL_PUBLIC_URL: 'https://balance.quillfen.example/' })).toMatchObject({
     port: 4460,

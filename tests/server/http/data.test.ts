@@ -70,11 +70,8 @@ describe('a deflection file', () => {
     expect(shown.body.total).toBe(rows);
     expect(shown.body.utcMs[1]).toBe(startUtcMs + 2000);
     expect(shown.body.value[1]).toBe(Number((100 * Math.sin(1 / 40)).toFixed(3)));
-    const kept = await database().connection.pool.query<{ bytes: Buffer }>(
-      'select bytes from import_pieces where import_id = $1 order by number',
-      [id],
-    );
-    expect(Buffer.concat(kept.rows.map(({ bytes }) => bytes)).toString()).toBe(text);
+    const original = await lab.as('viewer', 'GET', `${labPath}/imports/${id}/original`).expect(200);
+    expect(original.text).toBe(text);
 
     await put(id, text).expect(409);
     expect((await commit(id, 'readout').expect(409)).body.detail).toContain('is stored already');

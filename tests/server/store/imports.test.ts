@@ -2,7 +2,8 @@ import { eq } from 'drizzle-orm';
 import { runs } from '@/db/schema';
 import { endEvaluation, freezeEvaluation, queueEvaluation } from '@/server/store/evaluations';
 import { FrozenSamplesError, RowsAmongSamplesError, storeImport, StoredMeanwhileError, tryImport } from '@/server/store/import-commit';
-import { beginImport, ConflictingSamplesError, findOrMakeChannel } from '@/server/store/imports';
+import { beginImport } from '@/server/store/import-files';
+import { ConflictingSamplesError, findOrMakeChannel } from '@/server/store/imports';
 import type { Staging } from '@/server/store/import-staging';
 import { createSampleStore } from '@/server/store/sample-store';
 import { countSamples, sumsOf } from '@/server/store/sample-summaries';
@@ -16,6 +17,8 @@ const mapping: ImportMapping = {
   ...{ delimiter: ',', decimal: '.', headerRow: true, timeColumn: 0, timeFormat: 'iso', valueColumn: 1 },
   unit: 'rad',
 };
+
+const columns = ['time', 'angle'];
 
 type Rows = [utcMs: number[], value: number[]];
 
@@ -62,7 +65,7 @@ async function nightWithSamples() {
       const by = { labId: lab.id, runId: start.runId, createdAt: eveningUtcMs, createdBy: 'Tam' };
       const file = await beginImport(db, { ...by, fileName: 'night.csv' });
       const work = {
-        ...{ labId: lab.id, importId: file.id, channel: wanted, storedAt: eveningUtcMs, mapping, window },
+        ...{ labId: lab.id, importId: file.id, channel: wanted, storedAt: eveningUtcMs, mapping, columns, by: 'Tam', window },
         choices: { sameInstant: 'refuse' as const, among: 'refuse' as const, ...choices },
       };
       const { stored, known, other, leftOut } = await storeImport(connection, work, (staging) => staged(staging, at, value));
@@ -193,7 +196,7 @@ test('the summaries of an import are those that are computed from its samples, o
     rowsFrom(eveningUtcMs + 86_400_000 * 40, 500, 3_700_000),
   ];
   const work = {
-    ...{ labId: lab.id, importId: file.id, channel: wanted, storedAt: eveningUtcMs, mapping },
+    ...{ labId: lab.id, importId: file.id, channel: wanted, storedAt: eveningUtcMs, mapping, columns, by: 'Tam' },
     ...{
       window: { fromUtcMs: eveningUtcMs, toUtcMs: eveningUtcMs },
       choices: { sameInstant: 'refuse' as const, among: 'refuse' as const },

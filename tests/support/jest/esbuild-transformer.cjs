@@ -12,6 +12,8 @@ module.exports = {
       format: 'cjs',
       target: 'node20',
       sourcemap: 'external',
+      // Packages are loaded by Node itself, which has no `import()` in a realm of a test.
+      supported: { 'dynamic-import': false },
       jsx: 'automatic',
       jsxImportSource: 'nativewind',
       define: { 'process.env.EXPO_OS': '"web"' },
