@@ -1,16 +1,5 @@
 import { sql } from 'drizzle-orm';
-import {
-  bigint,
-  doublePrecision,
-  foreignKey,
-  index,
-  json,
-  pgTable,
-  primaryKey,
-  smallint,
-  text,
-  uniqueIndex,
-} from 'drizzle-orm/pg-core';
+import { bigint, doublePrecision, foreignKey, index, json, pgTable, primaryKey, smallint, text, uniqueIndex } from 'drizzle-orm/pg-core';
 import type { BrokerStatus, BrokerTopic } from '../../shared/contracts/brokers';
 import type { GBasis } from '@/shared/evaluation/g-basis';
 import type { ClockChoice } from '../../shared/evaluation/clock-choice';
