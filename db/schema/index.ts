@@ -8,3 +8,4 @@ export * from './imports';
 export * from './work';
 export * from './schedules';
 export * from './alarms';
+export * from './cameras';

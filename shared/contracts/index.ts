@@ -2,6 +2,7 @@ import * as alarms from './alarms';
 import * as audit from './audit';
 import * as brokers from './brokers';
 import * as calls from './calls';
+import * as cameras from './cameras';
 import * as data from './data';
 import * as devices from './devices';
 import * as doors from './doors';
@@ -45,6 +46,7 @@ export const routes: readonly RouteContract[] = [
   importFiles,
   devices,
   brokers,
+  cameras,
   exclusions,
   stepNotes,
   evaluations,

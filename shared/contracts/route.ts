@@ -28,7 +28,8 @@ export interface RouteContract {
     | 'application/x-ndjson'
     | 'application/zip'
     | 'application/pdf'
-    | 'application/json';
+    | 'application/json'
+    | 'image/*';
   readonly consumes?: 'text/csv' | 'application/x-ndjson';
   /** While the database is away it is answered out of the memory of the server that drives the runs, as far as that goes. */
   readonly fromMemory?: true;
