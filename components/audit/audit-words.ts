@@ -8,6 +8,7 @@ const areas: Readonly<Record<string, string>> = {
   'calendar-feed': 'Calendar feeds',
   'device-token': 'Device tokens',
   broker: 'Brokers',
+  camera: 'Cameras',
   'door-card': 'Door cards',
   job: 'Given-up jobs',
   lab: 'The lab',

@@ -109,6 +109,7 @@ async function seedRig(tx: Handle, { nowUtcMs, link = 'board' }: SeedParts): Pro
     // Mass sets are offered oldest first: the loaded one before the control.
     { ...own, id: demoIds.emptyControl, label: 'Empty control', sources: { shape: 'none' }, createdAt: nowUtcMs + 1 },
   ]);
+  await tx.insert(schema.cameras).values({ ...own, name: 'Above the rig', kind: 'drawn', madeAt: nowUtcMs, madeBy: keeper.name });
   await tx.insert(schema.channels).values({
     ...own,
     id: demoIds.channel,

@@ -4,6 +4,7 @@ import type { Express } from 'express';
 import { createApp } from '../http/create-app';
 import { allRoutes } from '../http/routes';
 import type { Services } from '../http/services';
+import { CameraWatch } from '../http/work/camera-watch';
 import { BrokerWatch } from '../http/work/broker-watch';
 import { heedSchedules } from '../http/work/scheduled-starts';
 import { sendSigns } from '../http/work/signs-of-life';
@@ -67,6 +68,7 @@ class Life {
   private ticks: { stop(): Promise<void> } | null = null;
   private stopped = false;
   private readonly brokers: BrokerWatch;
+  private readonly cameras: CameraWatch;
 
   constructor(
     private readonly services: Services,
@@ -74,7 +76,9 @@ class Life {
     private readonly parts: BuildParts,
   ) {
     const { paceMs } = parts.overrides ?? {};
-    this.brokers = new BrokerWatch({ services, holds: (rigId) => inside.leases.holds(rigId), open: openMqttLine, paceMs });
+    const holds = (rigId: string) => inside.leases.holds(rigId);
+    this.brokers = new BrokerWatch({ services, holds, open: openMqttLine, paceMs });
+    this.cameras = new CameraWatch({ services, holds, paceMs });
   }
 
   async start(): Promise<void> {
@@ -96,6 +100,7 @@ class Life {
     if (roles.includes('rig')) {
       inside.watch.start();
       this.brokers.start();
+      this.cameras.start();
     }
     if (this.parts.overrides?.ticks ?? services.config.mode !== 'test') this.ticks = startTicks(this.chores(), services.log);
   }
@@ -105,7 +110,7 @@ class Life {
     this.stopped = true;
     this.cancelRefresh();
     inside.watch.stop();
-    const brokersStopped = this.brokers.stop();
+    const watchesStopped = Promise.all([this.brokers.stop(), this.cameras.stop()]);
     services.live.close();
     services.lines.close();
     services.guided.closeAll();
@@ -113,7 +118,7 @@ class Life {
     services.supervisor.close();
     const crewStopped = inside.crew.stop();
     await inside.closeTasks();
-    await Promise.all([crewStopped, brokersStopped, this.ticks?.stop()]);
+    await Promise.all([crewStopped, watchesStopped, this.ticks?.stop()]);
     await inside.stations.close();
     await inside.apparatus.end();
     inside.arming.close();

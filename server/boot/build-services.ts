@@ -17,6 +17,7 @@ import { morningJobKind, workMorning } from '../http/work/morning-job';
 import { rehearsalJobKind, workRehearsal } from '../http/work/rehearsal-job';
 import { tellStarter } from '../http/work/tell-starter';
 import { AppendRates } from '../ingest/append-rate';
+import { createCameraPort } from '../ingest/camera-fetch';
 import { RecentSamples } from '../ingest/recent-samples';
 import { MailNotSetUp, type MailPort } from '../interfaces/mail';
 import type { ArrivedSamples } from '../interfaces/process-post';
@@ -144,7 +145,8 @@ function buildTelling({ database: { db }, clock, config, overrides = {} }: Build
   const address = /<([^>]+)>/.exec(config.mailFrom)?.[1] ?? config.mailFrom;
   const subject = config.publicUrl?.startsWith('https:') === true ? config.publicUrl : `mailto:${address}`;
   const push = overrides.push ?? createWebPush({ db, outgoing, subject, nowUtcMs });
-  return { mail, push, outgoing, tell: { db, clock, mail, push, origin } };
+  const cameras = createCameraPort({ hosts: config.cameraHosts, nowUtcMs });
+  return { mail, push, outgoing, cameras, tell: { db, clock, mail, push, origin } };
 }
 
 /** What follows runs and lines live. */

@@ -59,6 +59,7 @@ const environmentSchema = z.object({
     .optional(),
   EVENFALL_MAIL_FROM: z.string().min(3).default('Evenfall <evenfall@localhost>'),
   EVENFALL_PRIVATE_HOSTS: z.string().default('').transform(names),
+  EVENFALL_CAMERA_HOSTS: z.string().default('').transform(names),
   EVENFALL_METRICS_PORT: z.coerce.number().int().min(0).max(65_535).optional(),
   EVENFALL_LOG_LEVEL: z.enum(['silent', 'fatal', 'error', 'warn', 'info', 'debug']).default('info'),
   EVENFALL_REQUESTS_PER_MINUTE: count(10, 1_000_000, 1200),
@@ -114,6 +115,7 @@ export function readConfig(environment: Record<string, string | undefined>): Ser
     smtpUrl: env.EVENFALL_SMTP_URL ?? null,
     mailFrom: env.EVENFALL_MAIL_FROM,
     privateHosts: env.EVENFALL_PRIVATE_HOSTS,
+    cameraHosts: env.EVENFALL_CAMERA_HOSTS,
     metricsPort: env.EVENFALL_METRICS_PORT ?? null,
     logLevel: env.EVENFALL_LOG_LEVEL,
     limits: {

@@ -69,7 +69,9 @@ export class ServerRigStations implements RigStations {
     const link = createLink({ factory, clock: this.parts.clockOf(rig.id), rig: motion, epoch });
     const channel = apparatus === null ? null : await this.simulatedChannel(rig);
     const virtual = apparatus?.inputs ?? null;
-    const station: OpenStation = { labId: rig.labId, rigId: rig.id, settings: rig.link, link, channel, virtual, end: () => undefined };
+    const seen = apparatus === null ? null : () => apparatus.seen();
+    const facts = { labId: rig.labId, rigId: rig.id, settings: rig.link, link, channel, virtual, seen };
+    const station: OpenStation = { ...facts, end: () => undefined };
     const unsubscribe = link.subscribe((event) => this.parts.onLinkEvent(station, event));
     const endFlow = apparatus === null || channel === null ? () => undefined : this.flow(apparatus, station, channel);
     station.end = () => {

@@ -5,7 +5,7 @@ import { travelWithTurns } from '@/shared/rig/travel';
 import { feedSimulatedBalance } from '../ingest/simulated-balance';
 import type { ByteLineFactory } from '../interfaces/byte-line';
 import type { Cancel, Clock } from '../interfaces/clock';
-import type { VirtualInputs } from '../interfaces/rig-stations';
+import type { SeenRig, VirtualInputs } from '../interfaces/rig-stations';
 import type { SampleBatch } from '../interfaces/sample-store';
 import { createSimulatedController, type LightController, type SimulatedController } from '../links/simulated-controller';
 import type { ApparatusMemory, ApparatusState } from './apparatus-memory';
@@ -31,6 +31,8 @@ export class SimulatedApparatus {
   private balance: SimulatedBalance;
   private readonly born: { seed: number; uptimeS: number; atUtcMs: number };
   private sources: string;
+  private loaded: RigDocument;
+  private doorClosed = true;
 
   constructor(private readonly parts: ApparatusParts) {
     const { clock, document, seed, memory, rigId } = parts;
@@ -42,6 +44,7 @@ export class SimulatedApparatus {
       parts.controller === undefined ? createSimulatedController({ clock, rig: document.motion, seed: bootSeed, uptimeS, ...place }) : null;
     this.controller = parts.controller ?? (this.own as LightController);
     this.sources = JSON.stringify(document.sources);
+    this.loaded = document;
     this.balance = this.newBalance(document);
   }
 
@@ -50,8 +53,18 @@ export class SimulatedApparatus {
     const { controller } = this;
     return {
       turnKey: (on) => controller.turnArmKey(on),
-      setDoor: (closed) => (closed ? controller.closeInterlock() : controller.openInterlock()),
+      setDoor: (closed) => {
+        this.doorClosed = closed;
+        if (closed) controller.closeInterlock();
+        else controller.openInterlock();
+      },
     };
+  }
+
+  /** What a camera above it would see now. */
+  seen(): SeenRig {
+    const angleDeg = this.controller.trueAngleDegAt(this.parts.clock.utcMs());
+    return { rig: this.loaded, angleDeg, doorClosed: this.doorClosed };
   }
 
   get factory(): ByteLineFactory {
@@ -63,6 +76,7 @@ export class SimulatedApparatus {
     const sources = JSON.stringify(document.sources);
     if (sources === this.sources) return;
     this.sources = sources;
+    this.loaded = document;
     this.balance = this.newBalance(document);
   }
 

@@ -1,5 +1,6 @@
 import type { BuildArchiveInput, FrozenEvaluation } from '@/shared/archive/build-archive';
 import type { ChannelSeries } from '@/shared/archive/run-records';
+import { wholeFramesOf } from '../store/cameras';
 import { findFrozenEvaluation, type ListedRecord } from '../store/evaluations';
 import { exclusionsInForce } from '../store/exclusions';
 import { channelsOfRun, readEvents, readSteps, type RunRecord } from '../store/runs-read';
@@ -88,5 +89,18 @@ export async function archiveInputOf(services: Services, run: RunRecord, exclusi
     createdAt: isoOf(nowUtcMs),
     software: `Evenfall ${softwareVersion}`,
     title: `${start.protocolName} on ${start.rigName}`,
+  };
+}
+
+/** The camera frames of a run, for its archive alone; undefined where there are none. */
+export async function archivedFramesOf(services: Services, { labId, id }: RunRecord): Promise<Pick<BuildArchiveInput, 'frames'>> {
+  const rows = await wholeFramesOf(services.database.db, { labId, runId: id });
+  if (rows.length === 0) return {};
+  return {
+    frames: rows.map(({ seq, moment, at, cameraName, takenAt, uTakenS, type, bytes, note }) => {
+      const whole = bytes !== null && type !== null && takenAt !== null && uTakenS !== null;
+      const picture = whole ? { bytes, type, takenUtcMs: takenAt, uTakenS } : null;
+      return { seq, moment, atUtcMs: at, camera: cameraName, picture, note: note ?? '' };
+    }),
   };
 }

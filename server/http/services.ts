@@ -5,6 +5,7 @@ import type { GuidedMoves } from '../engine/guided-moves';
 import type { MotorSoak } from '../engine/motor-soak';
 import type { RigSupervisor } from '../engine/rig-supervisor';
 import type { ArmKeeper } from '../interfaces/arm-keeper';
+import type { CameraPort } from '../interfaces/camera';
 import type { Clock } from '../interfaces/clock';
 import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { IdempotencyPort } from '../interfaces/idempotency';
@@ -52,6 +53,7 @@ export interface Services {
   mail: MailPort;
   push: PushPort;
   outgoing: OutgoingPort;
+  cameras: CameraPort;
   /** How people are told, by every means. */
   tell: TellParts;
   samples: SampleStore;

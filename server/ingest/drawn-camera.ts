@@ -1,14 +1,5 @@
 import { crc32, deflateSync } from 'node:zlib';
-import type { RigDocument } from '@/shared/rig/document';
-
-/** A simulated rig as a camera above it would see it. */
-export interface SeenRig {
-  /** With the masses that lie on the turntable. */
-  rig: RigDocument;
-  /** Where the turntable truly stands, deg counter-clockwise from above. */
-  angleDeg: number;
-  doorClosed: boolean;
-}
+import type { SeenRig } from '../interfaces/rig-stations';
 
 type Colour = readonly [red: number, green: number, blue: number];
 

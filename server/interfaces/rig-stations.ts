@@ -13,6 +13,17 @@ export interface RigStation {
   channel: { id: string; name: string; unit: string } | null;
   /** Arm key and door of a rig that is part of this server; null where they are real and turned at the rig. */
   virtual: VirtualInputs | null;
+  /** How a rig that is part of this server truly stands now; null where it is real. */
+  seen: (() => SeenRig) | null;
+}
+
+/** A rig as a camera above it would see it. */
+export interface SeenRig {
+  /** With the masses that lie on the turntable. */
+  rig: RigDocument;
+  /** Where the turntable truly stands, deg counter-clockwise from above. */
+  angleDeg: number;
+  doorClosed: boolean;
 }
 
 export interface VirtualInputs {

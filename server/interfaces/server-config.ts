@@ -45,6 +45,8 @@ export interface ServerConfig {
   mailFrom: string;
   /** Hosts (`name:port`) of the own network that a sign of life or a push message may go to, also without TLS; all others must be public and speak https. */
   privateHosts: readonly string[];
+  /** Hosts (`name:port`) at which cameras may be; no other is asked for a picture. */
+  cameraHosts: readonly string[];
   /** Port on loopback with figures for Prometheus, 0: any free one; null: none. */
   metricsPort: number | null;
   logLevel: 'silent' | 'fatal' | 'error' | 'warn' | 'info' | 'debug';

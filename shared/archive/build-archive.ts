@@ -9,11 +9,12 @@ import { appendEvent, canonicalJson, emptyChain } from './chain';
 import { channelCsv, channelPath } from './channel-csv';
 import { citationText, crateMetadata, type DescribedEvaluation, type DescribedRun } from './describe-archive';
 import { exclusionsCsv, exclusionsFile, type Exclusion } from './exclusions';
+import { frameFiles, framesCsv, framesFile, type ArchivedFrame } from './frames';
 import { notesCsv, notesFile, type StepNote } from './notes';
 import { readmeFile, readmeText } from './readme-text';
 import type { ChainedEvent, ChannelSeries, SimulatedRun, StepRow } from './run-records';
 import { stepsCsv, stepsFile } from './step-csv';
-import { channelSchema, exclusionsSchema, notesSchema, stepsSchema, type TableSchema } from './table-schema';
+import { channelSchema, exclusionsSchema, framesSchema, notesSchema, stepsSchema, type TableSchema } from './table-schema';
 
 export interface ArchiveRunFacts {
   runId: string;
@@ -41,6 +42,7 @@ export interface BuildArchiveInput {
   channels: readonly ChannelSeries[];
   exclusions?: readonly Exclusion[];
   notes?: readonly StepNote[];
+  frames?: readonly ArchivedFrame[];
   evaluation?: FrozenEvaluation | null;
   /** ISO 8601 UTC: when the archive is made. Also the time of the `archived` event, unless the chain already ends in one. */
   createdAt: string;
@@ -71,6 +73,10 @@ export function buildArchive(input: BuildArchiveInput, sha256OfBytes: Sha256OfBy
   if (input.exclusions !== undefined)
     files.push(csvFile(exclusionsFile, exclusionsCsv(input.exclusions), { name: 'exclusions', schema: exclusionsSchema }));
   if (input.notes !== undefined) files.push(csvFile(notesFile, notesCsv(input.notes), { name: 'notes', schema: notesSchema }));
+  if (input.frames !== undefined) {
+    files.push(csvFile(framesFile, framesCsv(input.frames), { name: 'frames', schema: framesSchema }));
+    files.push(...frameFiles(input.frames));
+  }
   if (input.evaluation) files.push(jsonFile('evaluation.json', input.evaluation));
   files.push(...descriptions(input, files, sha256));
   const archive = new Map(files.map((file) => [file.path, file.bytes]));

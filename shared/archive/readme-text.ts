@@ -24,6 +24,7 @@ Run ${runId} of a torsion balance. ${found}
 | steps.csv | what was done: start and end of each step in UTC with u, turntable angles in degrees |
 | events.jsonl | the log as a chain: \`hash\` is the SHA-256 of the canonical JSON (RFC 8785) of a line without \`hash\`, \`prev\` that of the line before |
 | channels/*.csv | what was measured, in UTC |
+| frames/ | what cameras saw at both ends of swings and at marks, listed in frames/frames.csv; where there are any |
 | exclusions.csv, notes.csv, evaluation.json | stretches left out, what was written to steps, the frozen evaluation; where there are any |
 
 ## G again, by hand

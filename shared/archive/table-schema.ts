@@ -1,4 +1,5 @@
 import { exclusionColumns } from './exclusions';
+import { frameColumns } from './frames';
 import { noteColumns } from './notes';
 import { addedStepColumns, stepColumns } from './step-csv';
 
@@ -75,3 +76,16 @@ const noteFields: Record<(typeof noteColumns)[number], TableField> = {
 };
 
 export const notesSchema: TableSchema = { fields: noteColumns.map((name) => noteFields[name]) };
+
+const frameFields: Record<(typeof frameColumns)[number], TableField> = {
+  seq: { name: 'seq', type: 'integer', description: 'row of steps.csv that the frame belongs to' },
+  moment: { name: 'moment', type: 'string', description: 'mark, swing-began or swing-ended' },
+  at_utc: instant('at_utc', 'when that moment was'),
+  camera: { name: 'camera', type: 'string', description: 'name of the camera' },
+  taken_utc: instant('taken_utc', 'when the picture was taken; empty where there is none'),
+  u_taken_s: { name: 'u_taken_s', type: 'number', description: 'standard uncertainty of that instant; unit: s' },
+  path: { name: 'path', type: 'string', description: 'file of the archive; empty where there is none' },
+  note: { name: 'note', type: 'string', description: 'why there is no picture' },
+};
+
+export const framesSchema: TableSchema = { fields: frameColumns.map((name) => frameFields[name]) };

@@ -7,7 +7,6 @@ import { greatestStepCount } from './cursor';
 import type { ProtocolDocument } from './document';
 import { type Finding, withoutRepeats } from './finding';
 import { locateJsonError } from './json-position';
-import { notYet } from './support';
 import { planTimeline } from './timeline';
 
 /** Characters; a protocol of 10,000 steps written out one by one stays below. */
@@ -22,7 +21,7 @@ const greatestTextLength = 2_000_000;
 export function checkProtocol(document: unknown, rig: RigDocument, start?: CheckStart): Finding[] {
   const read = readDocument(document);
   if (read.document === null) return withoutRepeats(read.findings);
-  const structure = [...structureFindings(read.document, rig), ...conditionFindings(read.document, rig), ...notYet(read.document)];
+  const structure = [...structureFindings(read.document, rig), ...conditionFindings(read.document, rig)];
   const motion = nestsTooDeep(read.document) ? [] : motionFindings(read.document, rig, start);
   const findings = withoutRepeats([...structure, ...motion]);
   return findings.length === 0 && start !== undefined ? planFindings(read.document, rig, start) : findings;

@@ -209,11 +209,6 @@ describe('unusable input ends with 2, a sentence, and no folder', () => {
       [file('atlantis.json', { formatVersion: 1, name: 'x', steps: [{ kind: 'home' }, { kind: 'swing', to: 'atlantis' }] })],
       'atlantis',
     ],
-    [
-      'what is not built',
-      [file('frame.json', { formatVersion: 1, name: 'x', steps: [{ kind: 'home' }, { kind: 'mark', label: 'x', frame: true }] })],
-      'not-yet',
-    ],
     ['a rig without motion', [short(), '--rig', file('motionless.json', { ...demoRigWide, motion: undefined })], 'motion'],
     ['a rig without a period', [short(), '--rig', file('untimed.json', { ...demoRigWide, measured: undefined })], 'measured.period_s'],
     ['a seed that is none', [short(), '--seed', '1.5'], '--seed 1.5'],

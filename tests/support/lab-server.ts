@@ -44,7 +44,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
   ...{ webDir: null, filesDir: tmpdir(), s3: null },
   smtpUrl: null,
   mailFrom: 'Evenfall <evenfall@quillfen.example>',
-  ...{ privateHosts: [], metricsPort: null, logLevel: 'silent' },
+  ...{ privateHosts: [], cameraHosts: [], metricsPort: null, logLevel: 'silent' },
   limits: {
     requestsPerMinute: 1_000_000,
     interventionsPerMinute: 1_000_000,

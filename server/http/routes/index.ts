@@ -4,6 +4,7 @@ import { armingRoutes } from './arming';
 import { auditRoutes } from './audit';
 import { brokerRoutes } from './brokers';
 import { callRoutes } from './calls';
+import { cameraRoutes } from './cameras';
 import { dataRoutes } from './data';
 import { deviceRoutes } from './devices';
 import { doorRoutes } from './doors';
@@ -42,6 +43,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...sampleExportRoutes,
   ...deviceRoutes,
   ...brokerRoutes,
+  ...cameraRoutes,
   ...exclusionRoutes,
   ...stepNoteRoutes,
   ...evaluationRoutes,

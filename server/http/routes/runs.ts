@@ -6,7 +6,7 @@ import { stepsJson } from '@/shared/archive/step-json';
 import { findProtocol, findRevision } from '@/server/store/protocols';
 import { findMassSet, findRig } from '@/server/store/rigs';
 import * as store from '@/server/store/runs-read';
-import { archiveInputOf, assertEnded } from '../archive-input';
+import { archivedFramesOf, archiveInputOf, assertEnded } from '../archive-input';
 import { attach, fileWords } from '../attachment';
 import { assertFreshTap, beginRehearsal, beginRun } from '../begin-run';
 import { atTheRig, rigOfBody, rigOfItsRun } from '../desk/at-the-rig';
@@ -137,7 +137,7 @@ const recordRoutes = [
   mount(contracts.downloadArchive, async ({ params, membership, services, res }) => {
     const run = await load(services, membership.labId, params.runId);
     assertEnded(run);
-    const zip = await services.tasks.zipArchive(await archiveInputOf(services, run));
+    const zip = await services.tasks.zipArchive({ ...(await archiveInputOf(services, run)), ...(await archivedFramesOf(services, run)) });
     attachOf(res, run, '.zip');
     res.type('application/zip').send(Buffer.from(zip.buffer, zip.byteOffset, zip.byteLength));
     return undefined;

@@ -2,6 +2,7 @@ import { momentsIn, type AskedFrame } from '@/shared/camera/moments';
 import type { Picture } from '@/shared/camera/picture';
 import type { RunDriver } from '@/server/engine/run-driver';
 import type { RunChange } from '@/server/engine/run-driver-parts';
+import { sha256Hex } from '@/server/evaluation/sha256';
 import { drawRig } from '@/server/ingest/drawn-camera';
 import { NoPicture } from '@/server/interfaces/camera';
 import type { Cancel } from '@/server/interfaces/clock';
@@ -146,7 +147,7 @@ export class CameraWatch {
     held.askedMs = clock.monotonicMs();
     const took = await this.take(held.camera);
     held.reason = typeof took === 'string' ? took : null;
-    if (asked !== null) this.keep(held, frameOf(held.camera, asked, took, this.parts.services.sha256Bytes));
+    if (asked !== null) this.keep(held, frameOf(held.camera, asked, took));
     try {
       if (typeof took !== 'string') await store.putPicture(database.db, held.camera, took);
       await this.tell(held);
@@ -202,17 +203,12 @@ export class CameraWatch {
   }
 }
 
-function frameOf(
-  camera: store.CameraRecord,
-  { runId, seq, moment, utcMs }: Waiting,
-  took: Picture | string,
-  sha256?: (bytes: Uint8Array) => string,
-): NewFrame {
+function frameOf(camera: store.CameraRecord, { runId, seq, moment, utcMs }: Waiting, took: Picture | string): NewFrame {
   const none = { takenAt: null, uTakenS: null, type: null, sha256: null, size: 0, bytes: null };
   const about = { labId: camera.labId, cameraId: camera.id, cameraName: camera.name, runId, seq, moment, at: utcMs };
   if (typeof took === 'string') return { ...about, ...none, note: took };
   const { bytes, type, takenUtcMs, uTakenS } = took;
-  const kept = { takenAt: takenUtcMs, uTakenS, type, sha256: sha256?.(bytes) ?? null, size: bytes.length, bytes: Buffer.from(bytes) };
+  const kept = { takenAt: takenUtcMs, uTakenS, type, sha256: sha256Hex(bytes), size: bytes.length, bytes: Buffer.from(bytes) };
   return { ...about, ...kept, note: null };
 }
 

@@ -114,6 +114,7 @@ const testConfig = (stateDir: string, changes: Partial<ServerConfig>): ServerCon
   smtpUrl: null,
   mailFrom: 'Evenfall <evenfall@quillfen.example>',
   privateHosts: [],
+  cameraHosts: [],
   metricsPort: null,
   logLevel: 'silent',
   limits: { requestsPerMinute: 100_000, interventionsPerMinute: 1000, jsonBytes: 100_000, importBytes: 100_000, streamsPerUser: 6 },

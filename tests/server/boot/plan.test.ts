@@ -157,11 +157,6 @@ describe('unusable input ends with 2, nothing on stdout and the reason on stderr
       'keep-out arc 40° to 60°',
     ],
     [
-      'what is not built yet',
-      () => [file('g.json', protocol([{ kind: 'home' }, { kind: 'mark', label: 'x', frame: true }]))],
-      '2.mark: Camera frames are not built yet',
-    ],
-    [
       'a rig that does not fit its format',
       () => ['--template', 'still', '--rig', file('r.json', { ...demoRigWide, stations: { near: { value: 20, u: 0.05, unit: 'rad' } } })],
       'stations.near.unit',

@@ -42,12 +42,6 @@ const refusedStarts: { when: string; more: Partial<RunStart>; code: string; word
     code: 'protocol-refused',
     words: 'nowhere',
   },
-  {
-    when: 'with what is not built',
-    more: { protocol: { ...shortProtocol, steps: [{ kind: 'home' }, { kind: 'mark', label: 'x', frame: true }] } },
-    code: 'not-yet',
-    words: 'Camera frames',
-  },
   { when: 'on a rig without a link', more: { rigId: 'west-bench' }, code: 'not-ready', words: 'no link' },
 ];
 

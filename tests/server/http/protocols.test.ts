@@ -136,17 +136,6 @@ describe('a revision', () => {
     expect(answer.body.errors[0].message).toMatch(/behind the door.*near/s);
   });
 
-  test('is refused as not yet built where the format allows more than this version runs', async () => {
-    const made = await make('Later', {
-      formatVersion: 1,
-      name: 'Later',
-      steps: [{ kind: 'home' }, { kind: 'mark', label: 'x', frame: true }],
-    });
-    const answer = await issue(made.id, made.etag).expect(422);
-    expect(answer.body.code).toBe('not-yet');
-    expect(answer.body.errors).toMatchObject([{ path: '2.mark', code: 'not-yet' }]);
-  });
-
   test('with a number that is none is unknown', async () => {
     for (const number of ['9', 'x', '1.5', '99999999999999999999'])
       await lab.as('viewer', 'GET', `${protocols}/${demoIds.shortProtocol}/revisions/${number}`).expect(404);

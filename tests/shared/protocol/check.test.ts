@@ -199,12 +199,8 @@ describe('repeats', () => {
   });
 });
 
-describe('what is not built yet is valid in the format and refused as not-yet', () => {
-  test.each<[string, unknown, string]>([['a camera frame', { kind: 'mark', label: 'x', frame: true }, '2.mark']])('%s', (_, step, path) => {
-    expect(places([home, step], withTurns(2))).toEqual([`not-yet ${path}`]);
-  });
-
-  test('what is built of these fields is accepted', () => {
+describe('all of the format is carried out', () => {
+  test('also what is seldom asked for', () => {
     expect(
       checkProtocol(
         protocol(
@@ -212,7 +208,7 @@ describe('what is not built yet is valid in the format and refused as not-yet', 
             home,
             near,
             { kind: 'swing', to: 'far', profile: 'plain' },
-            { kind: 'mark', label: 'x', frame: false },
+            { kind: 'mark', label: 'x', frame: true },
             dwell,
             { kind: 'swing', to: 'near' },
             dwell,
