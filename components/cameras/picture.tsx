@@ -11,9 +11,9 @@ interface PictureProps {
 
 /** A camera's picture, as wide as its place; under the red lamp in shades of red alone. */
 export function Picture({ address, words, testID }: PictureProps) {
-  const { theme, colors } = useTheme();
+  const { name, colors } = useTheme();
   const [failed, setFailed] = useState<string | null>(null);
-  const red = theme === 'red';
+  const red = name === 'red';
   if (failed === address) return <Label>The picture could not be loaded.</Label>;
   return (
     <div style={{ background: red ? colors.text : undefined, borderRadius: 8, overflow: 'hidden' }}>

@@ -22,6 +22,8 @@ export const cameras = pgTable(
     /** Never told to anybody but the camera; gone with its removal. */
     userName: text('user_name'),
     password: text('password'),
+    /** SHA-256 (hex) of what a browser names that sends pictures; gone with its removal. */
+    tokenHash: text('token_hash'),
     madeAt: instant('made_at').notNull(),
     madeBy: text('made_by').notNull(),
     removedAt: instant('removed_at'),
@@ -35,6 +37,7 @@ export const cameras = pgTable(
     primaryKey({ columns: [table.labId, table.id] }),
     foreignKey({ columns: [table.labId, table.rigId], foreignColumns: [rigs.labId, rigs.id] }),
     index('cameras_rig').on(table.labId, table.rigId),
+    uniqueIndex('cameras_token').on(table.tokenHash),
   ],
 );
 

@@ -32,11 +32,11 @@ export function refusalOf(address: string, hosts: readonly string[]): string | n
 
 export function createCameraPort({ hosts, nowUtcMs, timeoutMs = usualTimeoutMs }: FetchParts): CameraPort {
   return {
-    take: async (camera) => {
+    take: async (camera, signal) => {
       const refusal = refusalOf(camera.address, hosts);
       if (refusal !== null) throw new NoPicture(refusal);
       const askedUtcMs = nowUtcMs();
-      const bytes = await fetched(camera, timeoutMs);
+      const bytes = await fetched(camera, { timeoutMs, stop: signal ?? null });
       return stamped(bytes, askedUtcMs, nowUtcMs());
     },
   };
@@ -50,7 +50,12 @@ function stamped(bytes: Buffer, askedUtcMs: number, cameUtcMs: number): Picture 
   return { bytes, type, takenUtcMs: askedUtcMs + 1000 * halfS, uTakenS: Math.max(0.001, halfS / Math.sqrt(3)) };
 }
 
-function fetched({ address, userName, password }: CameraAddress, timeoutMs: number): Promise<Buffer> {
+interface Wait {
+  timeoutMs: number;
+  stop: AbortSignal | null;
+}
+
+function fetched({ address, userName, password }: CameraAddress, wait: Wait): Promise<Buffer> {
   const url = new URL(address);
   const send = url.protocol === 'https:' ? httpsRequest : httpRequest;
   const signsIn = userName === null ? {} : { auth: `${userName}:${password ?? ''}` };
@@ -58,15 +63,15 @@ function fetched({ address, userName, password }: CameraAddress, timeoutMs: numb
     const options = {
       ...signsIn,
       headers: { 'User-Agent': 'Evenfall', Accept: [...pictureTypes, multipart].join(', ') },
-      signal: AbortSignal.timeout(timeoutMs),
+      signal: AbortSignal.any([AbortSignal.timeout(wait.timeoutMs), ...(wait.stop === null ? [] : [wait.stop])]),
       agent: false,
     };
     const request = send(url, options, (response) => {
       pictureIn(response)
-        .then(resolve, (error: unknown) => reject(worded(error, timeoutMs)))
+        .then(resolve, (error: unknown) => reject(worded(error, wait)))
         .finally(() => response.destroy());
     });
-    request.on('error', (error) => reject(worded(error, timeoutMs)));
+    request.on('error', (error) => reject(worded(error, wait)));
     request.end();
   });
 }
@@ -96,7 +101,8 @@ function refusalOfStatus(status: number, challenge: string): string | null {
     return `it answered ${String(status)}, a redirect to another address; that is not followed. Give the address where the picture is`;
   if (status === 401 && /^digest/i.test(challenge) && !/basic/i.test(challenge))
     return 'it wants Digest sign-in, which is not spoken here. Set it to Basic sign-in, or to none for this picture';
-  if (status === 401 || status === 403) return `it answered ${String(status)}: it asks for a name and a password, or refuses those it was given`;
+  if (status === 401 || status === 403)
+    return `it answered ${String(status)}: it asks for a name and a password, or refuses those it was given`;
   return `it answered ${String(status)} where 200 and a picture are right`;
 }
 
@@ -105,8 +111,10 @@ const wrongType = (name: string) =>
     ? 'it answered a page for people (text/html), not a picture. Give the address of the picture or of the MJPEG stream itself'
     : `it answered ${name === '' ? 'without a content type' : name}; image/jpeg, image/png or ${multipart} are taken`;
 
-export const tooLarge = () =>
-  new NoPicture(`its picture has more than ${String(MOST_PICTURE_BYTES / 1_048_576)} MiB. Set it to a smaller picture or a stronger compression`);
+const tooLarge = () =>
+  new NoPicture(
+    `its picture has more than ${String(MOST_PICTURE_BYTES / 1_048_576)} MiB. Set it to a smaller picture or a stronger compression`,
+  );
 
 function boundaryOf(parameters: readonly string[]): string {
   const found = parameters.find((parameter) => /^boundary=/i.test(parameter))?.slice('boundary='.length) ?? '';
@@ -116,8 +124,9 @@ function boundaryOf(parameters: readonly string[]): string {
 }
 
 /** What the system says, in words. */
-function worded(error: unknown, timeoutMs: number): NoPicture {
+function worded(error: unknown, { timeoutMs, stop }: Wait): NoPicture {
   if (error instanceof NoPicture) return error;
+  if (stop?.aborted === true) return new NoPicture('the server was stopped before a picture came');
   const { name, code, message } = error as NodeJS.ErrnoException;
   if (name === 'TimeoutError' || name === 'AbortError' || code === 'ABORT_ERR')
     return new NoPicture(`no whole picture came within ${String(timeoutMs / 1000)} s`);

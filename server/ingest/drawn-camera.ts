@@ -154,7 +154,8 @@ class Sheet {
         const share = Math.min(1, Math.max(0, 0.5 - distance(x, y)));
         if (share === 0) continue;
         const i = 3 * (y * width + x);
-        for (const [of, value] of colour.entries()) this.pixels[i + of] = Math.round((1 - share) * (this.pixels[i + of] ?? 0) + share * value);
+        for (const [of, value] of colour.entries())
+          this.pixels[i + of] = Math.round((1 - share) * (this.pixels[i + of] ?? 0) + share * value);
       }
   }
 }

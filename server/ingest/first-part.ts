@@ -14,7 +14,8 @@ export async function firstPart(stream: AsyncIterable<Buffer>, boundary: string)
     held = Buffer.concat([held, chunk]);
     const found = partIn(held, boundary);
     if (found !== null) return found;
-    if (held.length > MOST_PICTURE_BYTES + 2 * MOST_HEAD_BYTES) throw new NoPicture('its stream goes on for more than 1 MiB without a whole picture');
+    if (held.length > MOST_PICTURE_BYTES + 2 * MOST_HEAD_BYTES)
+      throw new NoPicture('its stream goes on for more than 1 MiB without a whole picture');
   }
   throw new NoPicture('its stream ended before a picture was whole');
 }
@@ -26,7 +27,8 @@ function partIn(held: Buffer, boundary: string): Buffer | null {
   if (headEnd < 0) return null;
   const head = held.subarray(begin, headEnd).toString('latin1');
   const type = /^content-type:\s*([^\s;]+)/im.exec(head)?.[1]?.toLowerCase() ?? '';
-  if (type !== 'image/jpeg') throw new NoPicture(`its stream holds ${type === '' ? 'parts without a content type' : type} instead of image/jpeg`);
+  if (type !== 'image/jpeg')
+    throw new NoPicture(`its stream holds ${type === '' ? 'parts without a content type' : type} instead of image/jpeg`);
   const from = headEnd + 2 * lineEnd.length;
   const length = Number(/^content-length:\s*(\d+)\s*$/im.exec(head)?.[1] ?? Number.NaN);
   if (length > MOST_PICTURE_BYTES) throw new NoPicture('its pictures have more than 1 MiB. Set it to smaller ones');

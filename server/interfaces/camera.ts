@@ -9,8 +9,8 @@ export interface CameraAddress {
 
 /** Asks cameras for pictures: only at hosts that the configuration names, without redirects, within bounds of size and time. */
 export interface CameraPort {
-  /** @throws NoPicture */
-  take(camera: CameraAddress): Promise<Picture>;
+  /** @throws NoPicture, also where `signal` ends the wait */
+  take(camera: CameraAddress, signal?: AbortSignal): Promise<Picture>;
 }
 
 /** There is no picture; says in a clause why, and what would be right. */

@@ -15,7 +15,7 @@ const counts = isNull(cameras.removedAt);
 
 export async function insertCamera(
   db: Handle,
-  camera: Pick<CameraRecord, 'labId' | 'rigId' | 'name' | 'kind' | 'address' | 'userName' | 'password' | 'madeAt' | 'madeBy'>,
+  camera: Pick<CameraRecord, 'labId' | 'rigId' | 'name' | 'kind' | 'address' | 'userName' | 'password' | 'tokenHash' | 'madeAt' | 'madeBy'>,
 ): Promise<CameraRecord> {
   return one(await db.insert(cameras).values(camera).returning());
 }
@@ -42,12 +42,21 @@ export async function removeCamera(
   const { labId, rigId, id, at, by } = camera;
   const [row] = await db
     .update(cameras)
-    .set({ removedAt: at, removedBy: by, userName: null, password: null })
+    .set({ removedAt: at, removedBy: by, userName: null, password: null, tokenHash: null })
     .where(and(eq(cameras.labId, labId), eq(cameras.rigId, rigId), eq(cameras.id, id), counts))
     .returning();
   if (row === undefined) return null;
   await db.delete(cameraPictures).where(and(eq(cameraPictures.labId, labId), eq(cameraPictures.cameraId, id)));
   return row;
+}
+
+/** The camera that counts whose token has this hash. */
+export async function cameraByHash(db: Handle, tokenHash: string): Promise<CameraRecord | null> {
+  const [row] = await db
+    .select()
+    .from(cameras)
+    .where(and(eq(cameras.tokenHash, tokenHash), counts));
+  return row ?? null;
 }
 
 /** Looking is noted to two seconds. */
@@ -130,7 +139,7 @@ export const framesOf = (db: Handle, { labId, runId }: OfRun): Promise<FrameFact
     .select(facts)
     .from(frames)
     .where(and(eq(frames.labId, labId), eq(frames.runId, runId)))
-    .orderBy(asc(frames.at), asc(frames.cameraName), asc(frames.id));
+    .orderBy(asc(frames.at), asc(frames.seq), asc(frames.cameraName), asc(frames.id));
 
 /** The same with their pictures. */
 export const wholeFramesOf = (db: Handle, { labId, runId }: OfRun): Promise<FrameRecord[]> =>
@@ -138,7 +147,7 @@ export const wholeFramesOf = (db: Handle, { labId, runId }: OfRun): Promise<Fram
     .select()
     .from(frames)
     .where(and(eq(frames.labId, labId), eq(frames.runId, runId)))
-    .orderBy(asc(frames.at), asc(frames.cameraName), asc(frames.id));
+    .orderBy(asc(frames.at), asc(frames.seq), asc(frames.cameraName), asc(frames.id));
 
 /** One frame that has a picture; null where the run has none with this id. */
 export async function findFrame(db: Handle, { labId, runId, id }: OfRun & { id: string }): Promise<FrameRecord | null> {

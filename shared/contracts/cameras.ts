@@ -5,8 +5,11 @@ import { defineRoute } from './route';
 
 /** Cameras that look at a rig, and the frames that runs keep of them. */
 
-/** `drawn`: the simulated rig as it truly stands; `address`: a camera of the network that gives a picture or an MJPEG stream. */
-export const cameraKinds = ['drawn', 'address'] as const;
+/**
+ * `drawn`: the simulated rig as it truly stands; `address`: a camera of the network that gives a picture or an MJPEG stream; `pushed`: a
+ * browser or a program sends its pictures with a token.
+ */
+export const cameraKinds = ['drawn', 'address', 'pushed'] as const;
 export type CameraKind = (typeof cameraKinds)[number];
 
 export const frameMoments = ['mark', 'swing-began', 'swing-ended'] as const;
@@ -64,6 +67,7 @@ export const addCamera = defineRoute({
   status: 201,
   body: z.discriminatedUnion('kind', [
     z.strictObject({ kind: z.literal('drawn'), name: nameSchema }),
+    z.strictObject({ kind: z.literal('pushed'), name: nameSchema }),
     z.strictObject({
       kind: z.literal('address'),
       name: nameSchema,
@@ -76,12 +80,31 @@ export const addCamera = defineRoute({
       password: z.string().min(1).max(1000).nullable(),
     }),
   ]),
-  response: cameraViewSchema,
+  response: z.strictObject({
+    camera: cameraViewSchema,
+    /** The token of one whose pictures are sent, shown once: only a hash of it is kept. Null for the others. */
+    secret: z.string().nullable(),
+  }),
   problems: ['invalid-input', 'not-found', 'not-possible-now', 'unreadable-data'],
+});
+export const sendCameraPicture = defineRoute({
+  name: 'sendCameraPicture',
+  summary:
+    'Send a picture, JPEG or PNG, with the token of its camera; it takes the place of the one before, and frames of a run are taken from it',
+  method: 'POST',
+  path: '/camera-pictures',
+  access: 'device',
+  status: 204,
+  consumes: 'image/*',
+  query: z.strictObject({
+    /** How long before this request the picture was taken, s, by the sender's own clock. */
+    ageS: z.coerce.number().min(0).max(60).default(0),
+  }),
+  problems: ['wrong-token', 'invalid-input', 'unreadable-data', 'too-large', 'wrong-content-type', 'too-many-requests'],
 });
 export const removeCamera = defineRoute({
   name: 'removeCamera',
-  summary: 'Remove a camera; its frames stay with their runs, its name and password are forgotten',
+  summary: 'Remove a camera; its frames stay with their runs, its name, password and token are forgotten',
   method: 'DELETE',
   path: `${path}/:cameraId`,
   access: 'tokens.manage',
@@ -90,7 +113,8 @@ export const removeCamera = defineRoute({
 });
 export const getCameraPicture = defineRoute({
   name: 'getCameraPicture',
-  summary: 'The newest picture of a camera, which is asked for new ones as long as somebody looks; the header Last-Modified says when it was taken',
+  summary:
+    'The newest picture of a camera, which is asked for new ones as long as somebody looks; the header Last-Modified says when it was taken',
   method: 'GET',
   path: `${path}/:cameraId/picture`,
   access: 'read',

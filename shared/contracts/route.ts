@@ -30,7 +30,7 @@ export interface RouteContract {
     | 'application/pdf'
     | 'application/json'
     | 'image/*';
-  readonly consumes?: 'text/csv' | 'application/x-ndjson';
+  readonly consumes?: 'text/csv' | 'application/x-ndjson' | 'image/*';
   /** While the database is away it is answered out of the memory of the server that drives the runs, as far as that goes. */
   readonly fromMemory?: true;
   /** A command: needs an `Idempotency-Key` header, a repeat returns the first answer. */

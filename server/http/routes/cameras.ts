@@ -2,11 +2,13 @@ import type { Response } from 'express';
 import type * as z from 'zod';
 import * as contracts from '@/shared/contracts/cameras';
 import type { CameraView, FrameView } from '@/shared/contracts/cameras';
+import { MOST_PICTURE_BYTES, pictureTypeOf } from '@/shared/camera/picture';
 import { refusalOf } from '@/server/ingest/camera-fetch';
 import { NoPicture } from '@/server/interfaces/camera';
 import * as store from '@/server/store/cameras';
 import { findRig } from '@/server/store/rigs';
 import { audited } from '../audited';
+import { bearerOf, boundedBody } from '../device-request';
 import { isoOf, isoOrNull } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
@@ -28,7 +30,20 @@ const viewOf = (camera: store.CameraRecord & { takenAt: number | null }): Camera
   status: camera.status,
 });
 
-function frameViewOf({ id, cameraId, cameraName, seq, moment, at, takenAt, uTakenS, type, sha256, size, note }: store.FrameFacts): FrameView {
+function frameViewOf({
+  id,
+  cameraId,
+  cameraName,
+  seq,
+  moment,
+  at,
+  takenAt,
+  uTakenS,
+  type,
+  sha256,
+  size,
+  note,
+}: store.FrameFacts): FrameView {
   const whole = takenAt !== null && uTakenS !== null && type !== null && sha256 !== null;
   const picture = whole ? { takenAt: isoOf(takenAt), uTakenS, type, sha256, bytes: size } : null;
   return { id, cameraId, camera: cameraName, seq, moment, at: isoOf(at), picture, note };
@@ -46,6 +61,7 @@ type NewCamera = z.output<typeof contracts.addCamera.body>;
 
 /** @throws ProblemError where no picture comes, saying why */
 async function assertGives(services: Services, body: NewCamera, simulated: boolean): Promise<void> {
+  if (body.kind === 'pushed') return;
   if (body.kind === 'drawn') {
     if (simulated) return;
     throw new ProblemError('not-possible-now', 'This rig is not part of the server, so it cannot be drawn. Give the address of a camera.');
@@ -61,7 +77,7 @@ async function assertGives(services: Services, body: NewCamera, simulated: boole
   }
 }
 
-function sendPicture(res: Response, { type, bytes, takenAt }: { type: string; bytes: Buffer; takenAt: number }): void {
+function answerWith(res: Response, { type, bytes, takenAt }: { type: string; bytes: Buffer; takenAt: number }): void {
   res.set('Last-Modified', new Date(takenAt).toUTCString());
   res.type(type).send(bytes);
 }
@@ -78,16 +94,18 @@ const rigRoutes = [
     const rig = await loadRig(services, membership.labId, params.rigId);
     const ofRig = { labId: membership.labId, rigId: rig.id };
     await assertGives(services, body, isSimulated(rig));
+    const secret = body.kind === 'pushed' ? services.newToken() : null;
     const data = ({ id, name, kind, address }: store.CameraRecord) => ({ rigId: rig.id, cameraId: id, name, kind, address });
     const made = await audited(context, { kind: 'camera.added', data }, async (tx) => {
       if ((await store.camerasOf(tx, ofRig)).length >= MOST_CAMERAS)
         throw new ProblemError('not-possible-now', `A rig has ${String(MOST_CAMERAS)} cameras at most. Remove one first.`);
       const { name, kind } = body;
-      const place = body.kind === 'drawn' ? { address: null, userName: null, password: null } : body;
-      const { address, userName, password } = place;
-      return store.insertCamera(tx, { ...ofRig, name, kind, address, userName, password, madeAt: services.clock.utcMs(), madeBy: me.name });
+      const { address, userName, password } = body.kind === 'address' ? body : { address: null, userName: null, password: null };
+      const tokenHash = secret === null ? null : services.sha256(secret);
+      const place = { address, userName, password, tokenHash };
+      return store.insertCamera(tx, { ...ofRig, name, kind, ...place, madeAt: services.clock.utcMs(), madeBy: me.name });
     });
-    return viewOf({ ...made, takenAt: null });
+    return { camera: viewOf({ ...made, takenAt: null }), secret };
   }),
 
   mount(contracts.removeCamera, async (context) => {
@@ -109,7 +127,7 @@ const rigRoutes = [
     const picture = await store.pictureOf(services.database.db, which);
     if (picture === null) throw notFound('picture of this camera yet');
     res.set('Cache-Control', 'no-store');
-    sendPicture(res, picture);
+    answerWith(res, picture);
     return undefined;
   }),
 ];
@@ -125,9 +143,38 @@ const runRoutes = [
     const frame = await store.findFrame(services.database.db, which);
     if (frame === null || frame.bytes === null || frame.type === null || frame.takenAt === null) throw notFound('picture of this frame');
     res.set('Cache-Control', 'private, max-age=31536000, immutable');
-    sendPicture(res, { type: frame.type, bytes: frame.bytes, takenAt: frame.takenAt });
+    answerWith(res, { type: frame.type, bytes: frame.bytes, takenAt: frame.takenAt });
     return undefined;
   }),
 ];
 
-export const cameraRoutes = [...rigRoutes, ...runRoutes];
+const tooLarge = () =>
+  new ProblemError('too-large', 'A picture has at most 1 MiB. Send a smaller one, or one that is compressed more; the one before stays.');
+
+/** Between taking and the request: rectangular (JCGM 100:2008, 4.3.7) over the way through a network, *common practice, no source*, s. */
+const WAY_S = 0.5;
+
+const wayIn = mount(contracts.sendCameraPicture, async ({ req, query, services }) => {
+  const { database, clock, sha256, appendRates, config } = services;
+  const cameUtcMs = clock.utcMs();
+  const camera = await store.cameraByHash(database.db, sha256(bearerOf(req)));
+  if (camera === null)
+    throw new ProblemError(
+      'wrong-token',
+      'No camera has this token, or it was removed. Add it on the page of the rig, which shows its token once.',
+    );
+  const share = appendRates.take(camera.id, 1);
+  if (!share.ok)
+    throw new ProblemError(
+      'too-many-requests',
+      `A camera may send ${String(config.devices.batchesPerMinute)} pictures a minute. Send the next one in ${String(Math.ceil(share.retryAfterS))} s.`,
+    ).after(share.retryAfterS);
+  const bytes = await boundedBody(req, MOST_PICTURE_BYTES, tooLarge);
+  const type = pictureTypeOf(bytes);
+  if (type === null) throw new ProblemError('unreadable-data', 'What came is no whole JPEG or PNG. The picture before stays.');
+  const takenUtcMs = cameUtcMs - 1000 * (query.ageS + WAY_S / 2);
+  await store.putPicture(database.db, camera, { bytes, type, takenUtcMs, uTakenS: WAY_S / Math.sqrt(12) });
+  return undefined;
+});
+
+export const cameraRoutes = [...rigRoutes, ...runRoutes, wayIn];

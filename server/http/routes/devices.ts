@@ -8,6 +8,7 @@ import { channelsOfRig, findOrMakeChannel, type ChannelRecord } from '@/server/s
 import { findRig } from '@/server/store/rigs';
 import { lastSampleUtcMs } from '@/server/store/sample-summaries';
 import { audited } from '../audited';
+import { bearerOf, boundedBody } from '../device-request';
 import { isoOf, isoOrNull } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
@@ -120,34 +121,17 @@ const deviceRoutesOfLab = [
 ];
 
 async function deviceOf(services: Services, req: Request): Promise<store.DeviceTokenRecord> {
-  const [, secret = ''] = /^Bearer (\S{20,200})$/.exec(req.get('authorization') ?? '') ?? [];
-  if (secret === '')
-    throw new ProblemError(
-      'wrong-token',
-      'A device names its token in the header: Authorization: Bearer TOKEN. It is made on the page of the rig.',
-    );
-  const device = await store.deviceTokenByHash(services.database.db, services.sha256(secret));
+  const device = await store.deviceTokenByHash(services.database.db, services.sha256(bearerOf(req)));
   if (device === null)
     throw new ProblemError('wrong-token', 'There is no such device token, or it was revoked. Make a new one on the page of the rig.');
   return device;
 }
 
-async function readText(req: Request, most: number): Promise<string> {
-  const tooLarge = () =>
-    new ProblemError(
-      'too-large',
-      `A batch has at most ${String(Math.round(most / 1024))} KiB. Send fewer lines at once; nothing was stored.`,
-    );
-  if (Number(req.headers['content-length'] ?? 0) > most) throw tooLarge();
-  const parts: Buffer[] = [];
-  let bytes = 0;
-  for await (const part of req as AsyncIterable<Buffer>) {
-    bytes += part.length;
-    if (bytes > most) throw tooLarge();
-    parts.push(part);
-  }
-  return Buffer.concat(parts).toString('utf8');
-}
+const tooLarge = (most: number) => () =>
+  new ProblemError(
+    'too-large',
+    `A batch has at most ${String(Math.round(most / 1024))} KiB. Send fewer lines at once; nothing was stored.`,
+  );
 
 function refusedLines(problems: readonly LineProblem[]): ProblemError {
   const items = problems.slice(0, MOST_PROBLEMS).map(({ line, message }) => ({ path: `line ${String(line)}`, message }));
@@ -201,7 +185,8 @@ async function storeAll(services: Services, device: store.DeviceTokenRecord, bat
 
 const wayIn = mount(contracts.appendSamples, async ({ req, services }) => {
   const device = await deviceOf(services, req);
-  const text = await readText(req, services.config.devices.batchBytes);
+  const { batchBytes } = services.config.devices;
+  const text = (await boundedBody(req, batchBytes, tooLarge(batchBytes))).toString('utf8');
   const read = readNdjson(text, { channels: device.channels, nowUtcMs: services.clock.utcMs() });
   const samples = [...read.batches.values()].reduce((sum, { utcMs }) => sum + utcMs.length, 0);
   takeShare(services, device, samples + read.problems.length);

@@ -12,13 +12,16 @@ import { isoOf } from '../maker';
 import type { Services } from '../services';
 
 /** Moments that wait for one camera; more are noted as missed. */
-export const MOST_WAITING = 8;
+const MOST_WAITING = 8;
 /** Of one run. */
 const MOST_FRAMES = 1000;
 const MOST_RUN_BYTES = 64 * 1_048_576;
 /** While somebody looks: how old the newest picture gets before there is another, and for how long one look counts, ms. */
 const LOOK_EVERY_MS = 2_000;
 const LOOK_LASTS_MS = 10_000;
+/** A picture that is sent belongs to a moment from so long before it, and until so long after it, ms. */
+const SENT_BEFORE_MS = 1_000;
+const SENT_AFTER_MS = 10_000;
 /** What is known of a camera is told at least so often, ms. */
 const TELL_MS = 15_000;
 /** Runs whose moments are remembered. */
@@ -51,7 +54,8 @@ export class CameraWatch {
   private readonly seen = new Map<string, Set<string>>();
   private cancel: Cancel = () => undefined;
   private unsubscribe: () => void = () => undefined;
-  private stopped = false;
+  private readonly running = new Set<Promise<void>>();
+  private readonly stopping = new AbortController();
   private turn: Promise<void> = Promise.resolve();
 
   constructor(private readonly parts: WatchParts) {}
@@ -63,14 +67,15 @@ export class CameraWatch {
   }
 
   async stop(): Promise<void> {
-    this.stopped = true;
+    this.stopping.abort();
     this.unsubscribe();
     this.cancel();
     await this.turn;
+    await Promise.all(this.running);
   }
 
   private plan(): void {
-    if (this.stopped) return;
+    if (this.stopping.signal.aborted) return;
     this.cancel = this.parts.services.clock.after(this.parts.paceMs ?? 1_000, () => {
       this.turn = this.look()
         .catch((error: unknown) => this.note(error))
@@ -90,13 +95,31 @@ export class CameraWatch {
     for (const camera of known) {
       const held = this.held.get(camera.id);
       if (held !== undefined) held.camera = camera;
-      else
-        this.held.set(camera.id, { camera, waiting: [], unstored: [], busy: false, askedMs: -Infinity, reason: null, tell: null });
+      else this.held.set(camera.id, { camera, waiting: [], unstored: [], busy: false, askedMs: -Infinity, reason: null, tell: null });
     }
     for (const held of this.held.values()) {
       await this.storeFrames(held);
-      this.work(held);
+      if (held.camera.kind === 'pushed') await this.fetchSent(held);
+      else this.work(held);
     }
+  }
+
+  /** Frames of a camera whose pictures are sent: the newest one, where it fits; one is waited for, but not for long. */
+  private async fetchSent(held: Held): Promise<void> {
+    const { clock, database } = this.parts.services;
+    const { camera, waiting } = held;
+    const newest = waiting.length === 0 ? null : await store.pictureOf(database.db, camera);
+    for (let asked = waiting[0]; asked !== undefined; asked = waiting[0]) {
+      const sinceMs = newest === null ? -Infinity : newest.takenAt - asked.utcMs;
+      const fits = newest !== null && sinceMs >= -SENT_BEFORE_MS && sinceMs <= SENT_AFTER_MS;
+      if (!fits && clock.utcMs() - asked.utcMs <= SENT_AFTER_MS) return;
+      waiting.shift();
+      const took = fits ? { ...newest, takenUtcMs: newest.takenAt } : `no picture of it came within ${String(SENT_AFTER_MS / 1000)} s`;
+      held.reason = typeof took === 'string' ? took : null;
+      this.keep(held, frameOf(camera, asked, took));
+      await this.tell(held);
+    }
+    await this.storeFrames(held);
   }
 
   /** What a run saved: nothing is waited for. */
@@ -122,18 +145,16 @@ export class CameraWatch {
   }
 
   private work(held: Held): void {
-    if (held.busy || this.stopped) return;
-    const { services } = this.parts;
+    if (held.busy || this.stopping.signal.aborted || held.camera.kind === 'pushed') return;
     const asked = held.waiting.shift();
     if (asked === undefined && !this.isLookedAt(held)) return;
     held.busy = true;
-    services.background(
-      this.takeOne(held, asked ?? null).finally(() => {
-        held.busy = false;
-        this.work(held);
-      }),
-      'taking a frame',
-    );
+    const taking = this.takeOne(held, asked ?? null).finally(() => {
+      held.busy = false;
+      this.running.delete(taking);
+      this.work(held);
+    });
+    this.running.add(taking);
   }
 
   private isLookedAt({ camera, askedMs }: Held): boolean {
@@ -161,7 +182,7 @@ export class CameraWatch {
   private async take({ kind, rigId, address, userName, password }: store.CameraRecord): Promise<Picture | string> {
     const { clock, stations, cameras, log } = this.parts.services;
     try {
-      if (kind === 'address') return await cameras.take({ address: address ?? '', userName, password });
+      if (kind === 'address') return await cameras.take({ address: address ?? '', userName, password }, this.stopping.signal);
       const seen = stations.get(rigId)?.seen?.() ?? null;
       if (seen === null) return 'this rig is not part of the server, so it cannot be drawn';
       const takenUtcMs = clock.utcMs();
@@ -184,8 +205,7 @@ export class CameraWatch {
       const frame = unstored.shift() as NewFrame;
       try {
         const size = await store.sizeOfFrames(db, frame);
-        if (size.frames >= MOST_FRAMES) continue;
-        await store.insertFrame(db, size.bytes + frame.size > MOST_RUN_BYTES ? withoutPicture(frame) : frame);
+        if (size.frames < MOST_FRAMES) await store.insertFrame(db, withinLimits(frame, size));
       } catch (error) {
         if (isPassing(error)) unstored.unshift(frame);
         throw error;
@@ -212,8 +232,10 @@ function frameOf(camera: store.CameraRecord, { runId, seq, moment, utcMs }: Wait
   return { ...about, ...kept, note: null };
 }
 
-const withoutPicture = (frame: NewFrame): NewFrame => ({
-  ...frame,
-  ...{ takenAt: null, uTakenS: null, type: null, sha256: null, size: 0, bytes: null },
-  note: `the frames of this run fill ${String(MOST_RUN_BYTES / 1_048_576)} MiB already`,
-});
+/** The last frame that a run may have says that it is the last; one for whose picture there is no room says so. */
+function withinLimits(frame: NewFrame, size: { frames: number; bytes: number }): NewFrame {
+  const without = { ...frame, takenAt: null, uTakenS: null, type: null, sha256: null, size: 0, bytes: null };
+  if (size.frames === MOST_FRAMES - 1) return { ...without, note: `this run has ${String(MOST_FRAMES)} frames; no more are kept` };
+  if (size.bytes + frame.size <= MOST_RUN_BYTES) return frame;
+  return { ...without, note: `the frames of this run fill ${String(MOST_RUN_BYTES / 1_048_576)} MiB already` };
+}

@@ -203,12 +203,17 @@ export const rows: Readonly<Record<string, Row>> = {
   },
   removeBroker: { params: (things) => ({ ...rig(things), brokerId: nobody }), allowed: 404 },
   listCameras: { params: rig, allowed: 200 },
-  addCamera: { params: rig, body: () => ({ kind: 'address', name: 'x', address: 'no address', userName: null, password: null }), allowed: 400 },
+  addCamera: {
+    params: rig,
+    body: () => ({ kind: 'address', name: 'x', address: 'no address', userName: null, password: null }),
+    allowed: 400,
+  },
   removeCamera: { params: (things) => ({ ...rig(things), cameraId: nobody }), allowed: 404 },
   getCameraPicture: { params: (things) => ({ ...rig(things), cameraId: nobody }), allowed: 404 },
   listFrames: { params: run, allowed: 200 },
   getFramePicture: { params: (things) => ({ ...run(things), frameId: nobody }), allowed: 404 },
   appendSamples: { raw: '{"time_utc": "2031-02-14T20:00:00Z", "value": 1}', allowed: 401 },
+  sendCameraPicture: { raw: 'no picture', allowed: 401 },
   listExclusions: { params: run, allowed: 200 },
   makeExclusion: { params: run, body: () => ({ startUtcMs: 2, endUtcMs: 1, reason: 'the door was open' }), allowed: 400 },
   withdrawExclusion: {

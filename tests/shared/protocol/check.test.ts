@@ -19,10 +19,6 @@ const protocol = (steps: Step[], more: Partial<ProtocolDocument> = {}): Protocol
 });
 const check = (steps: unknown[], rig: RigDocument = demoRigWide) => checkProtocol({ formatVersion: 1, name: 'Test', steps }, rig);
 const places = (steps: unknown[], rig: RigDocument = demoRigWide) => check(steps, rig).map(({ code, path }) => `${code} ${path}`);
-const withTurns = (turnsLimit: number): RigDocument => ({
-  ...demoRigWide,
-  motion: { ...demoRigWide.motion, turnsLimit } as NonNullable<RigDocument['motion']>,
-});
 
 test('a sound protocol has no findings', () => {
   expect(
