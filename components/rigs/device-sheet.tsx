@@ -5,6 +5,7 @@ import { Body, Button, Field, Label, ProblemNotice, Sheet, Tabs } from '@/compon
 import { readDecimal } from '@/components/ui/read-decimal';
 import { makeDeviceToken, type StreamChannel } from '@/shared/contracts/devices';
 import type { RigView } from '@/shared/contracts/rigs';
+import { SecretOnce } from './secret-once';
 
 /** Makes a token for a device: what it measures, how often; the token is shown once, with a line to try it. */
 export function DeviceSheet({ rig, onClose }: { rig: RigView; onClose: () => void }) {
@@ -93,12 +94,6 @@ export function DeviceSheet({ rig, onClose }: { rig: RigView; onClose: () => voi
 
 /** The one time that the token is seen. */
 function Made({ secret, name, channel, onClose }: { secret: string; name: string; channel: StreamChannel; onClose: () => void }) {
-  const [copied, setCopied] = useState<'yes' | 'no' | null>(null);
-  const copy = () =>
-    void navigator.clipboard
-      .writeText(secret)
-      .then(() => setCopied('yes'))
-      .catch(() => setCopied('no'));
   const line = `{"channel": "${channel.name}", "time_utc": "2031-02-14T20:00:00.1Z", "value": 12.3}`;
   const example = `curl -sS ${window.location.origin}/api/samples \\\n  -H "Authorization: Bearer $TOKEN" \\\n  -H "Content-Type: application/x-ndjson" \\\n  --data-binary '${line}'`;
   return (
@@ -110,22 +105,7 @@ function Made({ secret, name, channel, onClose }: { secret: string; name: string
       testID="device-made"
       footer={<Button kind="primary" size="action" label="I have copied it" onPress={onClose} testID="device-copied" />}
     >
-      <Body strong>Shown this once: only a hash of it is kept here.</Body>
-      <View className="rounded-action bg-panel2 p-3">
-        <Body size={13} className="break-all font-mono" testID="device-secret">
-          {secret}
-        </Body>
-      </View>
-      {'clipboard' in navigator ? (
-        <Button icon="duplicate" label="Copy" className="self-start" onPress={copy} testID="copy-secret" />
-      ) : null}
-      <Label role="status">
-        {copied === 'yes'
-          ? 'Copied. Put it where only the device can read it.'
-          : copied === 'no'
-            ? 'The browser did not let it be copied: mark the text and copy it.'
-            : 'Put it where only the device can read it. Whoever has it can fill this channel, and do nothing else.'}
-      </Label>
+      <SecretOnce secret={secret} may="fill this channel" testID="device-secret" />
       <Body strong>Try it</Body>
       <View className="rounded-action bg-panel2 p-3">
         <Body size={13} className="break-all font-mono">

@@ -2,6 +2,7 @@ import { useLocalSearchParams, useRouter, type Href } from 'expo-router';
 import { useState } from 'react';
 import { View } from 'react-native';
 import { useLab, useMay, wordsOf } from '@/components/api';
+import { CamerasPanel } from '@/components/cameras/cameras-panel';
 import { PlanView } from '@/components/charts/plan-view';
 import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, Section, useWide } from '@/components/ui';
 import type { RigView } from '@/shared/contracts/rigs';
@@ -65,6 +66,7 @@ export function RigScreen() {
       <ArmPanel rig={rig} />
       <LockPanel rig={rig} />
       <LinkPanel rig={rig} />
+      <CamerasPanel rig={rig} />
       <DevicesPanel rig={rig} />
     </Screen>
   );

@@ -62,14 +62,13 @@ export async function cameraByHash(db: Handle, tokenHash: string): Promise<Camer
 /** Looking is noted to two seconds. */
 const lookStepMs = 2_000;
 
-/** Somebody looks at the picture of a camera. */
-export async function noteLook(db: Handle, camera: { labId: string; rigId: string; id: string }, nowUtcMs: number): Promise<void> {
-  const { labId, rigId, id } = camera;
+/** Somebody looks at the cameras of a rig. */
+export async function noteLook(db: Handle, { labId, rigId }: OfRig, nowUtcMs: number): Promise<void> {
   const stale = or(isNull(cameras.lookedAt), lt(cameras.lookedAt, nowUtcMs - lookStepMs));
   await db
     .update(cameras)
     .set({ lookedAt: nowUtcMs })
-    .where(and(eq(cameras.labId, labId), eq(cameras.rigId, rigId), eq(cameras.id, id), counts, stale));
+    .where(and(eq(cameras.labId, labId), eq(cameras.rigId, rigId), counts, stale));
 }
 
 export async function tellCameraStatus(db: Handle, { labId, id }: Pick<CameraRecord, 'labId' | 'id'>, status: CameraStatus): Promise<void> {

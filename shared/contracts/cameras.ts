@@ -44,11 +44,12 @@ const nameSchema = z.string().trim().min(1, 'a name of at least one character').
 
 export const listCameras = defineRoute({
   name: 'listCameras',
-  summary: 'Cameras of a rig, with what became of the last picture',
+  summary: 'Cameras of a rig, with what became of the last picture; as long as somebody looks, cameras are asked for new ones',
   method: 'GET',
   path,
   access: 'read',
   status: 200,
+  query: z.strictObject({ look: z.enum(['true']).optional() }),
   response: z.strictObject({
     items: z.array(cameraViewSchema),
     /** Hosts that cameras may be at, as the server is set up. */
@@ -56,7 +57,7 @@ export const listCameras = defineRoute({
     /** Whether the rig is part of the server, so that it can be drawn. */
     simulated: z.boolean(),
   }),
-  problems: ['not-found'],
+  problems: ['invalid-input', 'not-found'],
 });
 export const addCamera = defineRoute({
   name: 'addCamera',
@@ -113,8 +114,7 @@ export const removeCamera = defineRoute({
 });
 export const getCameraPicture = defineRoute({
   name: 'getCameraPicture',
-  summary:
-    'The newest picture of a camera, which is asked for new ones as long as somebody looks; the header Last-Modified says when it was taken',
+  summary: 'The newest picture of a camera; the header Last-Modified says when it was taken',
   method: 'GET',
   path: `${path}/:cameraId/picture`,
   access: 'read',

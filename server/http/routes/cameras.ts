@@ -83,9 +83,12 @@ function answerWith(res: Response, { type, bytes, takenAt }: { type: string; byt
 }
 
 const rigRoutes = [
-  mount(contracts.listCameras, async ({ params, membership, services }) => {
+  mount(contracts.listCameras, async ({ params, query, membership, services }) => {
     const rig = await loadRig(services, membership.labId, params.rigId);
-    const items = await store.camerasOf(services.database.db, { labId: membership.labId, rigId: rig.id });
+    const ofRig = { labId: membership.labId, rigId: rig.id };
+    const { db } = services.database;
+    if (query.look === 'true') await store.noteLook(db, ofRig, services.clock.utcMs());
+    const items = await store.camerasOf(db, ofRig);
     return { items: items.map(viewOf), hosts: [...services.config.cameraHosts], simulated: isSimulated(rig) };
   }),
 
@@ -123,7 +126,6 @@ const rigRoutes = [
 
   mount(contracts.getCameraPicture, async ({ params, membership, services, res }) => {
     const which = { labId: membership.labId, rigId: params.rigId, id: params.cameraId };
-    await store.noteLook(services.database.db, which, services.clock.utcMs());
     const picture = await store.pictureOf(services.database.db, which);
     if (picture === null) throw notFound('picture of this camera yet');
     res.set('Cache-Control', 'no-store');

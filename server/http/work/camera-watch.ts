@@ -17,8 +17,8 @@ const MOST_WAITING = 8;
 const MOST_FRAMES = 1000;
 const MOST_RUN_BYTES = 64 * 1_048_576;
 /** While somebody looks: how old the newest picture gets before there is another, and for how long one look counts, ms. */
-const LOOK_EVERY_MS = 2_000;
-const LOOK_LASTS_MS = 10_000;
+const LOOK_EVERY_MS = 4_000;
+const LOOK_LASTS_MS = 20_000;
 /** A picture that is sent belongs to a moment from so long before it, and until so long after it, ms. */
 const SENT_BEFORE_MS = 1_000;
 const SENT_AFTER_MS = 10_000;

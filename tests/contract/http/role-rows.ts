@@ -205,7 +205,7 @@ export const rows: Readonly<Record<string, Row>> = {
   listCameras: { params: rig, allowed: 200 },
   addCamera: {
     params: rig,
-    body: () => ({ kind: 'address', name: 'x', address: 'no address', userName: null, password: null }),
+    body: () => ({ kind: 'address', name: 'x', address: 'http://camera.nowhere:80/picture.jpg', userName: null, password: null }),
     allowed: 400,
   },
   removeCamera: { params: (things) => ({ ...rig(things), cameraId: nobody }), allowed: 404 },

@@ -91,7 +91,8 @@ async function send(
     ...(row.ifMatch === undefined ? {} : { 'if-match': row.ifMatch(things) }),
   };
   const body = row.raw ?? (row.body === undefined ? null : JSON.stringify(row.body(things)));
-  if (body !== null) headers['content-type'] = row.raw === undefined ? 'application/json' : (contract.consumes?.replace('*', 'png') ?? 'text/csv');
+  if (body !== null)
+    headers['content-type'] = row.raw === undefined ? 'application/json' : (contract.consumes?.replace('*', 'png') ?? 'text/csv');
   const controller = new AbortController();
   const response = await fetch(`${address}/api${path}${query}`, { method: contract.method, headers, body, signal: controller.signal });
   if (contract.produces === 'text/event-stream' && response.status === 200) {
