@@ -16,7 +16,7 @@ export function Picture({ address, words, testID }: PictureProps) {
   const red = name === 'red';
   if (failed === address) return <Label>The picture could not be loaded.</Label>;
   return (
-    <div style={{ background: red ? colors.text : undefined, borderRadius: 8, overflow: 'hidden' }}>
+    <div style={{ background: red ? colors.text : undefined, borderRadius: 8, overflow: 'hidden', maxWidth: 480 }}>
       <img
         src={address}
         alt={words}
