@@ -14,6 +14,7 @@ import { listSteps, type StepRowView } from '@/shared/contracts/runs';
 import { formatFixed, unitSign } from '@/shared/lib/format-number';
 import { ExclusionList, useExclusions } from './exclusion-list';
 import { ExportLinks, type Span } from './export-links';
+import { KeptFiles } from './kept-files';
 
 const points = 3000;
 
@@ -70,6 +71,7 @@ export function DataScreen() {
           ) : null}
           <ChannelPlot key={channelId} runId={runId} channelId={channelId} />
           <Excluded runId={runId} />
+          <KeptFiles runId={runId} channels={channels} />
           <Button icon="import" label="Import a file" disabled={!may.ok} onPress={toImport} className="self-start" testID="to-import" />
           {may.ok ? null : <Label>{may.why}</Label>}
         </>

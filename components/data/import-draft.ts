@@ -1,7 +1,7 @@
 import { importChoicesSchema, type ImportCheck, type ImportChoices, type ImportMapping } from '@/shared/contracts/data';
-import type { ImportView } from '@/shared/contracts/import-files';
+import type { ImportView, RememberedMapping } from '@/shared/contracts/import-files';
 import { isTimeZone } from '@/shared/lib/is-time-zone';
-import type { MappingKey, RememberedMapping } from './remembered-mapping';
+import { fittingMapping, type MappingKey } from './remembered-mapping';
 
 /** An import as the person fills it in: nothing typed is lost by an error or a new answer. Pure. */
 
@@ -21,8 +21,8 @@ export interface ImportState {
   draft: MappingDraft | null;
   /** What the file left open; marked on the form until it is stated. */
   ambiguous: readonly MappingKey[];
-  /** The mapping was filled in as last time. */
-  remembered: boolean;
+  /** The mapping was filled in as it was for this file. */
+  remembered: RememberedMapping | null;
   channelName: string;
   /** What becomes of whatever the check found; `refuse` where nothing was chosen yet. */
   choices: ImportChoices;
@@ -31,7 +31,8 @@ export interface ImportState {
 }
 
 export type ImportAction =
-  | { kind: 'received'; imported: ImportView; remembered: RememberedMapping | null }
+  | { kind: 'received'; imported: ImportView; remembered: readonly RememberedMapping[] }
+  | { kind: 'guessed' }
   | { kind: 'changed'; change: Partial<MappingDraft> }
   | { kind: 'named'; channelName: string }
   | { kind: 'settled'; choices: Partial<ImportChoices> }
@@ -42,7 +43,7 @@ export const noImport = (channelName: string): ImportState => ({
   imported: null,
   draft: null,
   ambiguous: [],
-  remembered: false,
+  remembered: null,
   channelName,
   choices: importChoicesSchema.parse({}),
   check: null,
@@ -52,6 +53,8 @@ export function importReducer(state: ImportState, action: ImportAction): ImportS
   switch (action.kind) {
     case 'received':
       return received(state, action.imported, action.remembered);
+    case 'guessed':
+      return state.imported === null ? state : received(state, state.imported, []);
     case 'changed':
       return state.draft === null ? state : { ...state, draft: { ...state.draft, ...action.change }, check: null };
     case 'named':
@@ -79,19 +82,18 @@ const fieldWords: Record<MappingKey, string> = {
   unit: 'the unit of the deflection',
 };
 
-function received(state: ImportState, imported: ImportView, remembered: RememberedMapping | null): ImportState {
+function received(state: ImportState, imported: ImportView, remembered: readonly RememberedMapping[]): ImportState {
   const preview = imported.preview;
   if (preview === null) return { ...state, imported, draft: null, check: null };
   const ambiguous = preview.ambiguous.filter((key): key is MappingKey => key in fieldWords);
-  const names = preview.columns.map((column) => column.name);
-  const fits =
-    remembered !== null && remembered.columns.length === names.length && remembered.columns.every((name, index) => name === names[index]);
+  const columns = preview.columns.map((column) => column.name);
+  const fits = fittingMapping(remembered, { columns, channelName: state.channelName });
   const guessed = draftOf(preview.mapping);
   const open = Object.fromEntries(
     ambiguous.filter((key) => key !== 'elapsedFrom').map((key) => [key === 'timesWithoutZoneAreUtc' ? 'zone' : key, null]),
   );
-  const draft: MappingDraft = fits ? { ...draftOf(remembered.mapping), encoding: guessed.encoding } : { ...guessed, ...open };
-  return { ...state, imported, draft, ambiguous: fits ? [] : ambiguous, remembered: fits, check: null };
+  const draft: MappingDraft = fits === null ? { ...guessed, ...open } : { ...draftOf(fits.mapping), encoding: guessed.encoding };
+  return { ...state, imported, draft, ambiguous: fits === null ? ambiguous : [], remembered: fits, check: null };
 }
 
 function draftOf({ timesWithoutZoneAreUtc: utc, timeZone, ...mapping }: RememberedMapping['mapping']): MappingDraft {

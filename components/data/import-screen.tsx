@@ -6,6 +6,7 @@ import { Body, Button, Empty, Field, Icon, Label, Loading, Panel, ProblemNotice,
 import { readSamples } from '@/shared/contracts/data';
 import { getRun, type RunView } from '@/shared/contracts/runs';
 import { formatFixed } from '@/shared/lib/format-number';
+import { formatDayAndClock } from '@/shared/lib/format-time';
 import { CheckPanel } from './check-panel';
 import { FileDrop } from './file-drop';
 import { FindingsPanel } from './findings-panel';
@@ -13,6 +14,7 @@ import { columnNames, previewRows, textOf } from './file-preview';
 import { undecided } from './import-draft';
 import { MappingForm } from './mapping-form';
 import { PreviewTable } from './preview-table';
+import { sizeWords, UnfinishedFiles, UploadPanel } from './upload-panel';
 import { useImport, type StoredImport } from './use-import';
 
 /** Brings deflection data of a run in from a text file. */
@@ -53,17 +55,21 @@ function freeName(view: RunView, taken: readonly string[]): string {
 
 function ImportWork({ view, channelName }: { view: RunView; channelName: string }) {
   const { timeZone } = useLab();
-  const work = useImport(view.id, channelName);
-  const { state, step, failure, stored } = work;
+  const work = useImport({ runId: view.id, rigId: view.rigId }, channelName);
+  const { state, step, failure, stored, upload } = work;
   if (stored !== null) return <Stored runId={view.id} {...stored} onAnother={work.anotherFile} />;
   return (
     <View className="gap-4">
-      {state.imported === null || state.draft === null ? (
-        <FileDrop onFile={(file) => void work.send(file)} busy={step === 'sending'} />
-      ) : (
+      {state.imported !== null && state.draft !== null ? (
         <ChosenFile work={work} view={view} />
+      ) : upload !== null ? (
+        <UploadPanel {...upload} onCancel={() => void work.cancel()} />
+      ) : (
+        <>
+          <FileDrop onFile={(file) => void work.send(file)} busy={step === 'sending'} />
+          <UnfinishedFiles files={work.unfinished} onThrowAway={(id) => void work.throwAway(id)} />
+        </>
       )}
-      {step === 'sending' ? <Loading label="Sending the file" /> : null}
       {failure === null ? null : <ProblemNotice title={failure.title} detail={failure.detail} errors={failure.errors} />}
       {state.check === null ? null : (
         <>
@@ -97,7 +103,7 @@ function ChosenFile({ work, view }: { work: Work; view: RunView }) {
           <Body strong numberOfLines={1}>
             {imported.fileName}
           </Body>
-          <Label>{formatFixed(imported.bytes / 1024, { decimals: imported.bytes < 102_400 ? 1 : 0 })} KiB</Label>
+          <Label>{sizeWords(imported.bytes)}</Label>
         </View>
         <Button kind="quiet" label="Another file" onPress={work.anotherFile} />
       </View>
@@ -111,11 +117,14 @@ function ChosenFile({ work, view }: { work: Work; view: RunView }) {
       <Section
         title="How to read it"
         remark={
-          state.remembered
-            ? 'Filled in as the last time in this lab on this device. Please look over it.'
-            : 'Guessed from the file. What it does not tell stays open until you state it.'
+          state.remembered === null
+            ? 'Guessed from the file. What it does not tell stays open until you state it.'
+            : `Filled in as ${state.remembered.usedBy} read a file with the same columns into ${state.remembered.channelName}, ${formatDayAndClock(Date.parse(state.remembered.usedAt), timeZone)}. Please look over it.`
         }
       >
+        {state.remembered === null ? null : (
+          <Button kind="quiet" label="Guess from the file instead" onPress={work.guess} className="self-start" testID="guess-mapping" />
+        )}
         <MappingForm
           draft={draft}
           ambiguous={state.ambiguous}

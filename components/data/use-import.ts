@@ -2,9 +2,9 @@ import { useQueryClient } from '@tanstack/react-query';
 import { useReducer, useState } from 'react';
 import { call, labKey, useLab, wordsOf } from '@/components/api';
 import { checkImport, commitImport, readSamples, type ImportChoices } from '@/shared/contracts/data';
-import { beginImport, putImportContent } from '@/shared/contracts/import-files';
+import { listImportMappings, listImports } from '@/shared/contracts/import-files';
 import { completeMapping, importReducer, noImport } from './import-draft';
-import { readRemembered, remember } from './remembered-mapping';
+import { useUpload } from './use-upload';
 
 const headBytes = 65_536;
 
@@ -44,11 +44,12 @@ function useAttempt() {
 }
 
 /** An import from the choice of the file to the stored samples. Every failure leaves what was typed as it is. */
-export function useImport(runId: string, channelName: string) {
+export function useImport({ runId, rigId }: { runId: string; rigId: string }, channelName: string) {
   const { labId } = useLab();
   const queries = useQueryClient();
   const [state, dispatch] = useReducer(importReducer, channelName, noImport);
   const { step, failure, attempt, forget } = useAttempt();
+  const uploading = useUpload(runId);
   const [head, setHead] = useState<ArrayBuffer>(() => new ArrayBuffer(0));
   const [stored, setStored] = useState<StoredImport | null>(null);
 
@@ -65,10 +66,16 @@ export function useImport(runId: string, channelName: string) {
     send: (file: File) =>
       attempt('sending', `${file.name} was not taken in`, async () => {
         setHead(await file.slice(0, headBytes).arrayBuffer());
-        const begun = await call(beginImport, { params: { labId, runId }, body: { fileName: file.name } });
-        const { data } = await call(putImportContent, { params: { labId, importId: begun.data.id }, raw: file });
-        dispatch({ kind: 'received', imported: data, remembered: readRemembered(labId) });
+        const imported = await uploading.send(file);
+        if (imported === null) return;
+        const { data } = await call(listImportMappings, { params: { labId, rigId } });
+        dispatch({ kind: 'received', imported, remembered: data.items });
       }),
+    upload: uploading.progress,
+    unfinished: uploading.unfinished,
+    cancel: () => attempt(null, 'What has come was not thrown away', uploading.cancel),
+    throwAway: (id: string) => attempt(null, 'The file was not thrown away', () => uploading.throwAway(id)),
+    guess: () => dispatch({ kind: 'guessed' }),
     change: (change: Parameters<typeof completeMapping>[0] extends infer D ? Partial<D> : never) => dispatch({ kind: 'changed', change }),
     name: (name: string) => dispatch({ kind: 'named', channelName: name }),
     settle: (choices: Partial<ImportChoices>) => dispatch({ kind: 'settled', choices }),
@@ -88,9 +95,9 @@ export function useImport(runId: string, channelName: string) {
           params: { labId, importId },
           body: { mapping: mapping.mapping, channelName: state.channelName, choices: state.choices },
         });
-        remember(labId, state.imported?.preview?.columns.map((column) => column.name) ?? [], mapping.mapping);
         setStored({ ...data, choices: state.choices });
         await queries.invalidateQueries({ queryKey: labKey(labId, readSamples) });
+        await queries.invalidateQueries({ queryKey: labKey(labId, listImports) });
       }),
     anotherFile: () => {
       dispatch({ kind: 'another-file' });

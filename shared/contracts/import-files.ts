@@ -36,7 +36,7 @@ export const beginImport = defineRoute({
   body: z.strictObject({
     fileName: z.string().min(1).max(255),
     /** Length of a file that is to come in parts. */
-    bytes: z.number().int().positive().optional(),
+    bytes: z.number().int().nonnegative().optional(),
     changedAt: instantSchema.optional(),
   }),
   response: importViewSchema,

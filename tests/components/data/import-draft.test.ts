@@ -1,8 +1,7 @@
 import { completeMapping, importReducer, noImport, undecided, type ImportState } from '@/components/data/import-draft';
 import { columnNames, previewRows } from '@/components/data/file-preview';
-import type { RememberedMapping } from '@/components/data/remembered-mapping';
 import type { ImportCheck } from '@/shared/contracts/data';
-import type { ImportView } from '@/shared/contracts/import-files';
+import type { ImportView, RememberedMapping } from '@/shared/contracts/import-files';
 
 const findings: ImportCheck['findings'] = {
   ...{ held: 0, fresh: 9, equal: 0, different: 0, differing: [], frozen: false, among: { rows: 0, stretches: [] } },
@@ -26,7 +25,7 @@ const imported = (ambiguous: string[]): ImportView => ({
     mapping: { delimiter: ';', decimal: ',', headerRow: true, timeColumn: 0, timeFormat: 'iso', valueColumn: 1, unit: 'rad' },
   },
 });
-const received = (ambiguous: string[], remembered: RememberedMapping | null = null): ImportState =>
+const received = (ambiguous: string[], remembered: readonly RememberedMapping[] = []): ImportState =>
   importReducer(noImport('deflection'), { kind: 'received', imported: imported(ambiguous), remembered });
 const change = (state: ImportState, draft: Partial<NonNullable<ImportState['draft']>>) =>
   importReducer(state, { kind: 'changed', change: draft });
@@ -80,10 +79,19 @@ test('the mapping of last time fills in what is open, but only for a file with t
     valueColumn: 1,
     unit: 'mm',
   };
-  const again = received(['unit'], { columns: ['time', 'spot'], mapping });
-  expect(again.remembered).toBe(true);
+  const last = (channelName: string, columns: string[], unit: 'mm' | 'urad' = 'mm'): RememberedMapping => ({
+    ...{ channelName, columns, mapping: { ...mapping, unit }, usedAt: '2031-02-14T20:00:00.000Z', usedBy: 'Tam' },
+  });
+  const again = received(['unit'], [last('scale', ['time', 'spot'])]);
+  expect(again.remembered?.channelName).toBe('scale');
   expect(mappingOf(again)?.mapping?.unit).toBe('mm');
-  expect(received(['unit'], { columns: ['t', 'x'], mapping }).remembered).toBe(false);
+  expect(received(['unit'], [last('scale', ['t', 'x'])]).remembered).toBeNull();
+  // That of the same channel goes before that of another one, whichever was used last.
+  const both = received(['unit'], [last('scale', ['time', 'spot']), last('deflection', ['time', 'spot'], 'urad')]);
+  expect(mappingOf(both)?.mapping?.unit).toBe('urad');
+  const guessed = importReducer(both, { kind: 'guessed' });
+  expect(guessed.remembered).toBeNull();
+  expect(mappingOf(guessed)?.missing).toEqual(['the unit of the deflection']);
 });
 
 test('a changed mapping is unchecked again, and what was typed stays', () => {
