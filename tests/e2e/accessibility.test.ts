@@ -3,6 +3,7 @@ import { readFileSync } from 'node:fs';
 import { demoIds } from '@/db/demo/seed';
 import { reportCondition } from '@/server/store/alarms';
 import { sizes, type Size } from '../support/browser';
+import { bringsIn, checksAnother } from './support/brought-in';
 import { Hand, until } from './support/hand';
 import { labOfThisFile } from './support/lab';
 import { finishedNight, issued, read, shortNight, started } from './support/night';
@@ -25,11 +26,13 @@ interface Place {
 let finishedId: string;
 let runningId: string;
 let alarmId: string;
+let nightUtcMs: number;
 beforeAll(async () => {
   finishedId = await finishedNight(lab(), 2);
   const evaluations = `/labs/${demoIds.lab}/runs/${finishedId}/evaluations`;
   await lab().server.as('analyst', 'POST', evaluations).send({}).expect(202);
   await until(async () => (await lab().server.as('viewer', 'GET', evaluations)).body.items[0]?.state === 'done', 'the evaluation');
+  nightUtcMs = await bringsIn(lab(), finishedId);
   runningId = await started(lab(), await issued(lab(), shortNight('Going on', 12)));
   await lab().pass(60);
   const { services } = lab().server;
@@ -43,6 +46,8 @@ const opened = (testId: string, sheet: string) => async (hand: Hand) => {
   await hand.taps(testId);
   await hand.at(sheet).waitFor();
 };
+
+const says = (testId: string, words?: string) => async (hand: Hand) => void (await hand.reads(testId, words));
 
 const publicPlaces: Place[] = [
   { name: 'sign-in', path: '/sign-in', arrives: 'sign-in' },
@@ -64,16 +69,16 @@ function places(): Place[] {
       name: 'light-spot',
       path: `${rig}/light-spot`,
       arrives: 'spot-screen',
-      first: async (hand) => void (await hand.reads('spot-missing', 'open the camera')),
+      first: says('spot-missing', 'open the camera'),
     },
     { name: 'link', path: `${rig}/link`, arrives: 'link-screen', first: (hand) => hand.tapsOn('Serial line', 'radio') },
     {
       name: 'first-move',
       path: `${rig}/first-move`,
       arrives: 'first-move-screen',
-      first: async (hand) => void (await hand.reads('conditions')),
+      first: says('conditions'),
     },
-    { name: 'start', path: `${rig}/start`, arrives: 'start-screen', first: async (hand) => void (await hand.reads('start-checks')) },
+    { name: 'start', path: `${rig}/start`, arrives: 'start-screen', first: says('start-checks') },
     { name: 'protocols', path: '/protocols', arrives: 'protocols-screen' },
     { name: 'new-protocol', path: '/protocols/new', arrives: 'new-protocol-screen' },
     { name: 'editor', path: protocol, arrives: 'editor', first: (hand) => hand.taps('step-2') },
@@ -82,22 +87,18 @@ function places(): Place[] {
     { name: 'rehearse', path: protocol, arrives: 'editor', first: opened('rehearse', 'rehearse-sheet') },
     { name: 'more', path: protocol, arrives: 'editor', first: opened('open-more', 'more-sheet') },
     { name: 'revisions', path: `/protocols/${demoIds.shortProtocol}/revisions`, arrives: 'protocol-revisions' },
-    { name: 'runs', path: '/runs', arrives: 'runs-screen', first: async (hand) => void (await hand.reads('run-row')) },
-    { name: 'run', path: `/runs/${runningId}`, arrives: 'run-screen', first: async (hand) => void (await hand.reads('link-chip', 'live')) },
-    { name: 'result', path: `/runs/${finishedId}`, arrives: 'result-screen', first: async (hand) => void (await hand.reads('g-panel')) },
+    { name: 'runs', path: '/runs', arrives: 'runs-screen', first: says('run-row') },
+    { name: 'run', path: `/runs/${runningId}`, arrives: 'run-screen', first: says('link-chip', 'live') },
+    { name: 'result', path: `/runs/${finishedId}`, arrives: 'result-screen', first: says('g-panel') },
     { name: 'replay', path: `/runs/${finishedId}/replay`, arrives: 'replay-screen' },
     { name: 'step-log', path: `/runs/${finishedId}/log`, arrives: 'step-log', first: opened('events-3', 'chain-head') },
+    { name: 'data', path: `/runs/${finishedId}/data`, arrives: 'data-screen', first: says('kept-files', 'night.csv') },
+    { name: 'import', path: `/runs/${finishedId}/import`, arrives: 'import-screen', first: says('unfinished', 'another.csv') },
     {
-      name: 'data',
-      path: `/runs/${finishedId}/data`,
-      arrives: 'data-screen',
-      first: async (hand) => void (await hand.reads('channel-plot', 'samples')),
-    },
-    {
-      name: 'import',
-      path: `/runs/${finishedId}/import`,
+      name: 'findings',
+      path: `/runs/${finishedId}/import?again`,
       arrives: 'import-screen',
-      first: async (hand) => void (await hand.at('file-drop').waitFor()),
+      first: (hand) => checksAnother(hand, nightUtcMs),
     },
     {
       name: 'evaluation',
@@ -106,9 +107,9 @@ function places(): Place[] {
       first: (hand) => hand.taps('budget-table-toggle'),
     },
     { name: 'door-card', path: `${rig}/door`, arrives: 'door-screen' },
-    { name: 'calendar', path: '/calendar', arrives: 'calendar-screen', first: async (hand) => void (await hand.reads('room')) },
+    { name: 'calendar', path: '/calendar', arrives: 'calendar-screen', first: says('room') },
     { name: 'schedule', path: '/calendar', arrives: 'calendar-screen', first: opened('schedule-a-run', 'schedule-confirm') },
-    { name: 'lab', path: '/lab', arrives: 'lab-screen', first: async (hand) => void (await hand.reads('on-call', 'Whoever')) },
+    { name: 'lab', path: '/lab', arrives: 'lab-screen', first: says('on-call', 'Whoever') },
     { name: 'on-call', path: '/lab', arrives: 'lab-screen', first: opened('change-on-call', 'on-call-sheet') },
     { name: 'limit', path: rig, arrives: 'rig-screen', first: opened('add-limit', 'limit-sheet') },
     {
@@ -120,7 +121,7 @@ function places(): Place[] {
         await hand.taps(hand.at('audit-entry').getByRole('button'));
       },
     },
-    { name: 'alarms', path: '/alarms', arrives: 'alarms-screen', first: async (hand) => void (await hand.reads('standing-alarms')) },
+    { name: 'alarms', path: '/alarms', arrives: 'alarms-screen', first: says('standing-alarms') },
     { name: 'alarm', path: `/alarms/${alarmId}`, arrives: 'alarm-screen', first: opened('shelve', 'reason-sheet') },
   ];
 }
