@@ -25,8 +25,7 @@ interface Place {
 
 let finishedId: string;
 let runningId: string;
-let alarmId: string;
-let nightUtcMs: number;
+let [alarmId, nightUtcMs] = ['', 0];
 beforeAll(async () => {
   finishedId = await finishedNight(lab(), 2);
   const evaluations = `/labs/${demoIds.lab}/runs/${finishedId}/evaluations`;
