@@ -26,16 +26,19 @@ const sources: Record<StepRowView['angleSource'], string> = {
 export const PlanPanel = memo(function PlanPanel({ view, rows, beat, lost, large = false }: PlanPanelProps) {
   const moved = rows.findLast((row) => isMotion(row) && row.endUtcMs !== null);
   const angleDeg = beat?.angleDeg ?? moved?.angleEndDeg ?? null;
+  // The controller answers and does not know where the table stands: it restarted, or homes.
+  const unknown = !view.rehearsal && beat?.link === 'ready' && beat.angleDeg === null;
+  const old = lost || unknown;
   return (
     <Panel className={large ? 'items-center gap-4' : 'flex-row items-center gap-5'}>
-      <PlanView rig={view.rig} angleDeg={angleDeg} sizePx={large ? 260 : 132} old={lost} />
+      <PlanView rig={view.rig} angleDeg={angleDeg} sizePx={large ? 260 : 132} old={old} />
       <View className={large ? 'w-full flex-row justify-between gap-4' : 'min-w-0 shrink gap-3'}>
         <View>
-          <Label>Turntable{lost ? ', last known' : ''}</Label>
-          <Num size={24} tone={lost ? 'dim' : 'text'} testID="turntable-angle">
+          <Label>Turntable{old ? ', last known' : ''}</Label>
+          <Num size={24} tone={old ? 'dim' : 'text'} testID="turntable-angle">
             {formatDegrees(angleDeg)}
           </Num>
-          {moved && large ? <Label>{sources[moved.angleSource]}</Label> : null}
+          {unknown ? <Label tone="text">position not known</Label> : moved && large ? <Label>{sources[moved.angleSource]}</Label> : null}
         </View>
         {moved?.endUtcMs == null ? null : (
           <View>

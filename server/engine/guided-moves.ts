@@ -1,8 +1,14 @@
-import { homingObstacle, isWound } from '@/shared/protocol/homing';
-import type { RigDocument, RigMotion } from '@/shared/rig/document';
-import { keepOutEntered } from '@/shared/rig/travel';
 import type { Cancel, Clock } from '../interfaces/clock';
 import type { ControllerLimits, LinkEvent, TeachOutcome, TurntableLink } from '../interfaces/turntable-link';
+import {
+  assertHoming,
+  assertNudge,
+  GuidedRefused,
+  homingLimitMs,
+  type GuidedRequest,
+  type GuidedRig,
+  type MoveRequest,
+} from './guided-orders';
 import { beginGuided, heardGuided, isUnderWay, withOrder, type GuidedState } from './guided-state';
 import type { Arm } from './run-context';
 
@@ -22,28 +28,6 @@ export interface GuidedParts {
 export interface Person {
   id: string;
   name: string;
-}
-
-export interface GuidedRig {
-  labId: string;
-  rigId: string;
-  name: string;
-  document: RigDocument;
-  motion: RigMotion;
-}
-
-export type GuidedRefusalCode = 'rig-busy' | 'locked' | 'not-armed' | 'not-ready' | 'not-possible-now' | 'invalid-input';
-
-/** An order that is refused, with a sentence that says what would be right. */
-export class GuidedRefused extends Error {
-  constructor(
-    readonly code: GuidedRefusalCode,
-    message: string,
-    /** The field of the request that is meant, if one is. */
-    readonly field?: string,
-  ) {
-    super(message);
-  }
 }
 
 /** A hold or stop by hand, apart from runs. */
@@ -77,6 +61,8 @@ interface OpenSession extends GuidedSession {
   seenMs: number;
   orders: number;
   cancelWatch: Cancel;
+  /** Homing that finds no edge is not let go on for ever. */
+  cancelLimit: Cancel;
 }
 
 /** A page that has not answered the live stream for so long is taken for left: motion ends. */
@@ -116,6 +102,7 @@ export class GuidedMoves {
       state: beginGuided(),
       orders: 0,
       cancelWatch: () => undefined,
+      cancelLimit: () => undefined,
     };
     this.sessions.set(rig.rigId, session);
     this.watch(session);
@@ -212,6 +199,8 @@ export class GuidedMoves {
     const steps = order.kind === 'nudge' ? order.steps : null;
     session.state = withOrder(session.state, { id, sentAtUtcMs: this.parts.clock.utcMs(), kind: order.kind, steps });
     link.setLeaseRule(() => this.mayRenew(session));
+    session.cancelLimit();
+    if (order.kind === 'home') this.limitHoming(session);
     link.send(
       order.kind === 'home' ? { kind: 'home', id } : { kind: 'nudge', id, turnDeg: order.steps / session.rig.motion.stepsPerDegree },
     );
@@ -246,7 +235,7 @@ export class GuidedMoves {
   }
 
   /** The rig has a new revision: its line was opened anew. */
-  revised(rigId: string, document: RigDocument): void {
+  revised(rigId: string, document: GuidedRig['document']): void {
     const session = this.sessions.get(rigId);
     const { motion } = document;
     if (session === undefined || motion === undefined) return;
@@ -280,6 +269,7 @@ export class GuidedMoves {
   private close(session: OpenSession): void {
     const { rigId } = session.rig;
     session.cancelWatch();
+    session.cancelLimit();
     if (isUnderWay(session.state)) this.halt(session.rig, 'hold', session.by);
     this.sessions.delete(rigId);
     this.parts.linkOf(rigId)?.setLeaseRule(() => false);
@@ -308,6 +298,14 @@ export class GuidedMoves {
       this.parts.lockedBy(rigId) === null &&
       this.parts.takenBy(rigId) === null
     );
+  }
+
+  private limitHoming(session: OpenSession): void {
+    const { rig, orders } = session;
+    session.cancelLimit = this.parts.clock.after(homingLimitMs(rig.motion), () => {
+      const name = 'the server: the edge of the home flag was not found in the time that the whole way takes';
+      if (session.orders === orders && isUnderWay(session.state)) this.halt(rig, 'hold', { id: '', name });
+    });
   }
 
   /** Motion ends 2 s after the last answered beat, the session half a minute after it. */
@@ -341,51 +339,4 @@ export class GuidedMoves {
       throw new GuidedRefused('not-ready', 'The turntable is moving. Wait until it stands still.');
     return link;
   }
-}
-
-export type GuidedRequest = MoveRequest | { kind: 'teach' };
-
-/** `intoKeepOut`: whoever orders looks at the gap and means to go into an arc that is kept out of runs. */
-export type MoveRequest = { kind: 'home'; intoKeepOut: boolean } | { kind: 'nudge'; steps: number; intoKeepOut: boolean };
-
-/** The longest nudge that the controller takes, microsteps (SPEC 8.9): a 36th of its soft travel, rounded up. */
-export function longestNudgeSteps(motion: RigMotion, link: TurntableLink): number {
-  const limits = link.limits();
-  const travelDeg = limits === null ? motion.maxDeg - motion.minDeg : limits.greatestDeg - limits.leastDeg;
-  return Math.ceil(Number(((travelDeg * motion.stepsPerDegree) / 36).toFixed(6)));
-}
-
-function assertNudge(motion: RigMotion, link: TurntableLink, { steps, intoKeepOut }: Extract<GuidedRequest, { kind: 'nudge' }>): void {
-  const longest = longestNudgeSteps(motion, link);
-  if (!Number.isInteger(steps) || steps === 0 || Math.abs(steps) > longest)
-    throw new GuidedRefused(
-      'invalid-input',
-      `A nudge of ${String(steps)} microsteps is not taken: a whole number from 1 to ${String(longest)}, either way, is (a 36th of the travel that the controller has).`,
-      'steps',
-    );
-  const angleDeg = link.controller()?.angleDeg ?? null;
-  if (angleDeg === null || intoKeepOut) return;
-  const met = keepOutEntered(motion, angleDeg, angleDeg + steps / motion.stepsPerDegree);
-  if (met !== null)
-    throw new GuidedRefused(
-      'not-possible-now',
-      `This nudge would enter what is kept out of runs: ${met}. Say that you look at the gap, or turn the other way.`,
-    );
-}
-
-/** Homing turns by itself, with masses on the table perhaps: where it might not turn towards the middle somebody has to look. */
-function assertHoming(
-  { document, motion }: GuidedRig,
-  link: TurntableLink,
-  { intoKeepOut }: Extract<GuidedRequest, { kind: 'home' }>,
-): void {
-  const angleDeg = link.controller()?.angleDeg ?? null;
-  // No look at the gap makes the turns undone that the flag does not count.
-  const mayLook = angleDeg === null || !isWound(motion, angleDeg);
-  const obstacle = intoKeepOut && mayLook ? null : homingObstacle(document, angleDeg);
-  if (obstacle !== null)
-    throw new GuidedRefused(
-      'not-possible-now',
-      `The rig does not home by itself: ${obstacle}.${mayLook ? ' Say that you look at the gap, or correct the rig document.' : ''}`,
-    );
 }

@@ -1,6 +1,7 @@
 import type { GuidedView, LineMessage, LinkHealthView } from '@/shared/contracts/link';
 import type { MotionLimits } from '@/shared/rig/travel';
-import { longestNudgeSteps, type GuidedSession, type Halt } from '../engine/guided-moves';
+import type { GuidedSession, Halt } from '../engine/guided-moves';
+import { longestNudgeSteps } from '../engine/guided-orders';
 import type { GuidedOrder } from '../engine/guided-state';
 import type { RigStation } from '../interfaces/rig-stations';
 import type { ControllerLimits, LinkHealth } from '../interfaces/turntable-link';

@@ -132,6 +132,8 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await lab().pass(10);
     await hand.reads('run-state', 'Held');
     await hand.reads('held-notice', /controller restarted/);
+    // What is drawn of the turntable is said to be old.
+    await hand.page.getByText('position not known').filter({ visible: true }).first().waitFor();
     await hand.shoots('controller-reset');
     expect(await hand.isEnabled('resume')).toBe(false);
     await hand.reads('resume-why', 'this run cannot go on. Stop it, and home the rig in a new run.');

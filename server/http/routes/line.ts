@@ -2,7 +2,7 @@ import * as contracts from '@/shared/contracts/link';
 import { homeSpeedDegS } from '@/shared/protocol/durations';
 import type { RigMotion } from '@/shared/rig/document';
 import { travelWithTurns } from '@/shared/rig/travel';
-import { GuidedRefused, type MoveRequest, type GuidedRig } from '@/server/engine/guided-moves';
+import { GuidedRefused, type MoveRequest, type GuidedRig } from '@/server/engine/guided-orders';
 import type { ControllerLimits } from '@/server/interfaces/turntable-link';
 import { findRig, listRigs, type RigRecord } from '@/server/store/rigs';
 import { auditLater, audited } from '../audited';

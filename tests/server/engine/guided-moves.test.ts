@@ -1,71 +1,10 @@
-import { ABSENT_MS, GuidedMoves, GuidedRefused, longestNudgeSteps, type GuidedRig } from '@/server/engine/guided-moves';
-import { VirtualClock } from '@/server/engine/virtual-clock';
-import { createLink } from '@/server/links/link-driver';
-import { createSimulatedController } from '@/server/links/simulated-controller';
-import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
-import type { RigMotion } from '@/shared/rig/document';
-import { settle, startUtcMs } from './rig-bench';
+import { type Bench, anna, begun, nudge, refusal } from './guided-bench';
+import { ABSENT_MS } from '@/server/engine/guided-moves';
+import { longestNudgeSteps } from '@/server/engine/guided-orders';
+import { demoRigNarrow } from '@/shared/rig/demo-rigs';
+import { type RigMotion } from '@/shared/rig/document';
 
-/** A guided first move on the simulated controller, behind the same bytes as a real one. */
-
-const anna = { id: 'u-anna', name: 'Anna Fellstone' };
-
-async function makeBench(motion: RigMotion = demoRigWide.motion as RigMotion, start: { startDeg?: number; homed?: boolean } = {}) {
-  const clock = new VirtualClock(startUtcMs, settle);
-  const turntable = createSimulatedController({ clock, rig: motion, ...start });
-  const link = createLink({ factory: turntable.factory, clock, rig: motion, epoch: 3 });
-  const world = { armed: true, run: null as string | null, lock: null as string | null, ended: [] as string[] };
-  const moves = new GuidedMoves({
-    clock,
-    linkOf: () => link,
-    armOf: () => (world.armed ? { name: 'Anna Fellstone', untilUtcMs: startUtcMs + 3_600_000 } : null),
-    takenBy: () => world.run,
-    lockedBy: () => world.lock,
-    endArm: (_rig, why) => {
-      world.armed = false;
-      world.ended.push(why);
-    },
-    onChange: () => undefined,
-  });
-  link.subscribe((event) => moves.heard('north', event));
-  link.open();
-  await clock.advance(3_000);
-  const rig: GuidedRig = { labId: 'lab', rigId: 'north', name: 'North bench', document: { ...demoRigWide, motion }, motion };
-  const asked = { rigId: 'north', sessionId: 's-1', userId: anna.id };
-  /** Time goes by with the page open, which answers each beat of the stream after 120 ms. */
-  const stay = async (seconds: number) => {
-    for (let step = 0; step < seconds * 2; step += 1) {
-      const beat = clock.monotonicMs();
-      await clock.advance(120);
-      if (moves.of('north') !== null) moves.seen(asked, beat);
-      await clock.advance(380);
-    }
-  };
-  const state = () => moves.of('north')?.state;
-  return { clock, turntable, link, world, moves, rig, asked, stay, state, angle: () => turntable.trueAngleDegAt(clock.utcMs()) };
-}
-
-type Bench = Awaited<ReturnType<typeof makeBench>>;
-
-async function begun(motion?: RigMotion, start?: { startDeg?: number; homed?: boolean }): Promise<Bench> {
-  const bench = await makeBench(motion, start);
-  bench.moves.begin(bench.rig, anna, 's-1');
-  return bench;
-}
-
-const nudge = (steps: number, intoKeepOut = false) => ({ kind: 'nudge', steps, intoKeepOut }) as const;
-
-const home = { kind: 'home', intoKeepOut: false } as const;
-
-function refusal(act: () => unknown): GuidedRefused {
-  try {
-    act();
-  } catch (error) {
-    if (error instanceof GuidedRefused) return error;
-    throw error;
-  }
-  throw new Error('it was not refused');
-}
+/** A guided first move: nudges, who may give them, and what ends them. */
 
 describe('a nudge', () => {
   test('turns by exactly the microsteps asked, counter-clockwise for a positive number, and is counted', async () => {
@@ -221,46 +160,6 @@ test('a move cut short while the position is unknown begins the count anew', asy
   moves.halt({ labId: 'lab', rigId: 'north' }, 'hold', anna);
   await stay(2);
   expect(state()).toMatchObject({ order: { state: 'cut short' }, count: { number: 2, steps: 0 } });
-});
-
-test('homing by hand finds the edge; passes of it are kept with their steps and direction', async () => {
-  const { moves, asked, stay, state, link } = await begun(undefined, { homed: false, startDeg: 2 });
-  moves.order(asked, home);
-  await stay(15);
-  expect(state()).toMatchObject({ order: { kind: 'home', state: 'done' }, edges: [{ steps: 0, direction: 'ccw' }] });
-  expect(link.controller()).toMatchObject({ positionKnown: true, angleDeg: 0 });
-  moves.order(asked, nudge(-40));
-  await stay(4);
-  expect(state()?.edges.at(-1)).toMatchObject({ direction: 'cw' });
-});
-
-test('a rig whose way to the edge may not be free homes only when somebody says that they look at it', async () => {
-  const motion = { ...(demoRigNarrow.motion as RigMotion), homeDeg: 31 };
-  const { moves, asked, stay, state, angle } = await begun(motion, { homed: false, startDeg: 33 });
-  const before = angle();
-  expect(moves.whyNot('north')).toBe('');
-  expect(refusal(() => moves.order(asked, home))).toMatchObject({
-    code: 'not-possible-now',
-    message: expect.stringMatching(/does not home by itself: .* does not lie between near and far/),
-  });
-  await stay(4);
-  expect(angle()).toBe(before);
-  moves.order(asked, { ...home, intoKeepOut: true });
-  await stay(30);
-  expect(state()?.order).toMatchObject({ kind: 'home', state: 'done' });
-});
-
-test('a table that a rotation has left wound up is not homed, whoever looks, before nudges bring it back into its travel', async () => {
-  const turning: RigMotion = { ...(demoRigWide.motion as RigMotion), turnsLimit: 2 };
-  const { moves, asked, stay, link } = await begun(turning, { startDeg: 220 });
-  for (const intoKeepOut of [false, true])
-    expect(refusal(() => moves.order(asked, { ...home, intoKeepOut })).message).toMatch(
-      /stands at 220\.005°, wound up .* by nudges first\.$/,
-    );
-  moves.order(asked, nudge(-longestNudgeSteps(turning, link)));
-  await stay(120);
-  expect(link.controller()?.angleDeg).toBeLessThan(175);
-  expect(moves.order(asked, home).state.order).toMatchObject({ kind: 'home', state: 'sent' });
 });
 
 test('one person at a time, and ending gives the rig free and holds what moves', async () => {
