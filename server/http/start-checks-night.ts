@@ -1,16 +1,18 @@
 import type { StartCheck } from '@/shared/contracts/rigs';
-import { formatClock } from '@/shared/lib/format-time';
+import { formatClock, formatDayAndClock } from '@/shared/lib/format-time';
 import { adviseSurroundings } from '@/shared/protocol/advise-surroundings';
 import type { Timeline } from '@/shared/protocol/timeline';
 import { againstRoom } from '@/shared/schedule/room';
 import { listRigRevisions } from '../store/rigs';
 import { hoursOfRoom } from '../store/schedules';
+import { calendarOf } from './calendar';
 import type { Services } from './services';
 import { check, note, pass, type StartPlan } from './start-check-parts';
 
-/** What whoever starts by hand decides with open eyes: the hours of the room, and measured values that something has changed since. Neither keeps a run from starting. */
+/** What whoever starts by hand decides with open eyes: the hours of the room, starts that are scheduled meanwhile, and measured values that something has changed since. None of them keeps a run from starting. */
 export async function nightChecks({ database }: Services, plan: StartPlan, timeline: Timeline): Promise<StartCheck[]> {
-  return [...(await roomCheck(database, plan, timeline)), ...(await calibrationCheck(database, plan, timeline))];
+  const checks = [roomCheck, scheduleCheck, calibrationCheck].map((look) => look(database, plan, timeline));
+  return (await Promise.all(checks)).flat();
 }
 
 type Asked<T> = (database: Services['database'], plan: StartPlan, timeline: Timeline) => Promise<T[]>;
@@ -24,6 +26,21 @@ const roomCheck: Asked<StartCheck> = async ({ db }, { rig, timeZone }, { startUt
       ? pass(`It would be over at ${formatClock(endUtcMs, { timeZone })}, within the hours of the room.`)
       : note(`${against} Started all the same, it is not ended at that time by itself.`);
   return [check('room', 'Hours of the room', outcome)];
+};
+
+/** Of two runs on one rig only one can be: the start that comes while this one goes on is missed. */
+const scheduleCheck: Asked<StartCheck> = async ({ db }, { rig, timeZone }, { startUtcMs, endUtcMs }) => {
+  const coming = await calendarOf(db, { labId: rig.labId, timeZone, fromUtcMs: startUtcMs, untilUtcMs: endUtcMs });
+  const first = coming.find(({ rigId, state, dueAt }) => rigId === rig.id && state === 'planned' && Date.parse(dueAt) > startUtcMs);
+  if (first === undefined) return [];
+  const due = formatDayAndClock(Date.parse(first.dueAt), timeZone);
+  return [
+    check(
+      'schedule',
+      'Scheduled starts',
+      note(`"${first.protocolName}" is scheduled here for ${due}, while this run would still be on: that start would be missed.`),
+    ),
+  ];
 };
 
 const calibrationCheck: Asked<StartCheck> = async ({ db }, { rig, protocol, timeZone }, { startUtcMs, endUtcMs }) => {

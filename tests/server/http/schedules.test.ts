@@ -133,6 +133,30 @@ test('what cannot be is refused at once, with what would be right', async () => 
   await ask({ kind: 'once', date: '2031-03-02', time: '22:00' }, { revision: 7 }).expect(404);
 });
 
+test('whoever starts by hand is told of a start that the run would be in the way of; one skipped or on another day is none', async () => {
+  const due = new Date(Math.ceil(lab.clock.utcMs() / minute) * minute + 2 * minute);
+  const local = new Date(due.getTime() + hour).toISOString();
+  const checks = `${base}/rigs/${demoIds.rig}/start-checks?protocolId=${demoIds.shortProtocol}&revision=1`;
+  const told = async () =>
+    (await lab.as('operator', 'GET', checks).expect(200)).body.checks.filter(({ code }: { code: string }) => code === 'schedule');
+  const { body: later } = await ask({ kind: 'once', date: '2031-02-20', time: '22:00' }).expect(201);
+  expect(await told()).toEqual([]);
+  const { body: soon } = await ask({ kind: 'once', date: local.slice(0, 10), time: local.slice(11, 16) }).expect(201);
+  expect(await told()).toMatchObject([
+    {
+      state: 'note',
+      detail: expect.stringMatching(
+        new RegExp(`"There and back" is scheduled here for .*${local.slice(11, 16)}.*that start would be missed`),
+      ),
+    },
+  ]);
+  const skips = `${base}/schedules/${String(soon.id)}/skips`;
+  await lab.as('operator', 'PUT', skips).send({ dueAt: due.toISOString(), skipped: true }).expect(200);
+  expect(await told()).toEqual([]);
+  await end(soon.id as string);
+  await end(later.id as string);
+});
+
 test('night window and blackout dates of the room are honoured', async () => {
   const hours = {
     nightWindow: { from: '21:00', until: '06:30' },
