@@ -9,5 +9,6 @@ export { FitPlot } from './fit-plot';
 export { ResidualPlot } from './residual-plot';
 export { beyondAxes, residualRms, sharedAxes, type SharedAxes } from './residuals';
 export { ReversalPlot } from './reversal-plot';
+export { SparkLine } from './spark-line';
 export { TorquePlot } from './torque-plot';
 export type { Series } from './curve';

@@ -23,6 +23,7 @@ import { isOver } from './run-words';
 import { useIntervention } from './use-intervention';
 import { useLiveRun, type LiveRun } from './use-live-run';
 import { useNow } from './use-now';
+import { Surroundings } from './surroundings';
 import { ReachedPanel, WaitingPanel } from './waiting-panel';
 import { useRunStrip } from './use-run-strip';
 
@@ -80,6 +81,7 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
   const afterDwell = <AfterDwell view={view} timeZone={timeZone} serverNowMs={serverNowMs} onTap={() => tap('hold-after-dwell')} />;
   const finish = <FinishEarly view={view} timeZone={timeZone} />;
   const isFinishing = view.finishing !== null && view.finishing.withdrawnBy === null;
+  const around = view.rehearsal ? null : <Surroundings view={view} serverNowMs={serverNowMs} />;
   const log = <RecentSteps runId={view.id} protocol={view.protocol} rows={state.rows} timeZone={timeZone} count={wide ? 7 : 4} />;
   return (
     <Screen
@@ -91,6 +93,7 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
       aside={
         <>
           {plan}
+          {around}
           {log}
         </>
       }
@@ -109,6 +112,7 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
       {view.holdAfterDwell ? null : afterDwell}
       {isFinishing ? null : finish}
       {wide ? null : plan}
+      {wide ? null : around}
       {wide ? null : log}
       <Facts view={view} />
     </Screen>

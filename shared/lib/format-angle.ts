@@ -34,8 +34,10 @@ export function formatDeflectionUncertain(angle: { value: number; u: number | nu
   return formatUncertain(scaledUncertain(angle), options);
 }
 
-/** A reading of a channel in the channel's own unit, with digits to suit its size. */
+const ofPlace = new Set(['rad', 'mrad', 'urad', 'm', 'mm']);
+
+/** A reading of a channel in the channel's own unit, with digits to suit its size; a deflection with its sign, either way of it. */
 export function formatReading(value: number, unit: string): string {
   if (unit === 'rad') return formatDeflection(value);
-  return withUnit(formatSignificant(value, 4, { signed: true }), unit);
+  return withUnit(formatSignificant(value, 4, { signed: ofPlace.has(unit) }), unit);
 }

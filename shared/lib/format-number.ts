@@ -67,5 +67,5 @@ export function unitSign(unit: string): string {
 export function withUnit(number: string, unit: string): string {
   const sign = unitSign(unit);
   if (sign === '') return number;
-  return /^[°′″]/.test(sign) ? `${number}${sign}` : `${number}${NARROW_SPACE}${sign}`;
+  return /^[°′″]$/.test(sign) ? `${number}${sign}` : `${number}${NARROW_SPACE}${sign}`;
 }

@@ -27,8 +27,15 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
   let hand: Hand;
   let runId: string;
   let network: Network;
+  /** A channel of the room, and the secret of the device that fills it. */
+  let air: string;
+  let thermometer: string;
   const chapter = chapters(() => hand);
   beforeAll(async () => {
+    air = `air ${size}`;
+    const device = { name: 'thermometer', channels: [{ name: air, role: 'environment', unit: '°C', rateHz: 0.1 }] };
+    const made = await lab().server.as('owner', 'POST', `/labs/${demoIds.lab}/rigs/${demoIds.rig}/devices`).send(device).expect(201);
+    thermometer = String(made.body.secret);
     network = await Network.to(lab().address);
     hand = new Hand(await lab().open(size, 'operator', { address: network.address }));
   });
@@ -129,6 +136,25 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.reads('turntable-angle', '−20.18°');
     await hand.hears('live-strip', /4 near dwells and 4 far dwells.*Now: dwell at far.*measured deflection/);
     await hand.shoots('run');
+  });
+
+  chapter('the surroundings are beside it: what the lab measures of its room, since when, and when that falls silent', async () => {
+    await hand.reads('surroundings', /Nothing in this run yet/);
+    const nowMs = lab().server.clock.utcMs();
+    const line = (index: number) =>
+      JSON.stringify({ channel: air, time_utc: new Date(nowMs - 50_000 + index * 10_000).toISOString(), value: 19.2 + index / 100 });
+    const sent = await fetch(`${lab().address}/api/samples`, {
+      method: 'POST',
+      headers: { authorization: `Bearer ${thermometer}`, 'content-type': 'application/x-ndjson' },
+      body: Array.from({ length: 6 }, (_, index) => line(index)).join('\n'),
+    });
+    expect(await sent.json()).toMatchObject({ stored: 6 });
+    await hand.page.reload();
+    await hand.reads('surroundings', /19\.25 °C.*19\.20 °C to .*19\.25 °C in this run/);
+    await hand.at('surroundings').scrollIntoViewIfNeeded();
+    await hand.shoots('surroundings');
+    await lab().pass(90);
+    await hand.reads('surroundings', /silent, last sample 1 min ago/);
   });
 
   chapter('a hold says that the server has it before it says that the turntable stands still', async () => {
