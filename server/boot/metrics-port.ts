@@ -1,9 +1,11 @@
 import { createServer, type Server } from 'node:http';
 import { monitorEventLoopDelay } from 'node:perf_hooks';
 import { sql } from 'drizzle-orm';
+import type { BrokerStatus } from '@/shared/contracts/brokers';
 import { gauge, metricsText, type Metric } from '../http/metrics';
 import { readinessOf, type Readiness } from '../http/readiness';
 import type { Services } from '../http/services';
+import { allBrokers } from '../store/brokers';
 import { allRigs } from '../store/rigs';
 import { freeDisk } from './free-disk';
 
@@ -71,7 +73,7 @@ export class MetricsPort {
       ...(free === null ? [] : [gauge('evenfall_disk_free_ratio', 'Free part of the disk of the state folder.', free)]),
       gauge('evenfall_live_streams', 'Pages that follow a run or a line.', services.live.count() + services.lines.count()),
       ...services.answers.metrics(),
-      ...(readiness.database === 'answers' ? [...(await this.rigs()), ...(await this.work())] : []),
+      ...(readiness.database === 'answers' ? [...(await this.rigs()), ...(await this.brokers()), ...(await this.work())] : []),
     ]);
   }
 
@@ -104,6 +106,23 @@ export class MetricsPort {
       ),
       each('evenfall_rig_reconnects', 'How often the line was opened anew.', ({ health }) => health.reconnects),
       each('evenfall_rig_clock_u_seconds', 'Standard uncertainty of the controller’s clock.', ({ health }) => health.clockUS),
+    ];
+  }
+
+  private async brokers(): Promise<Metric[]> {
+    const { services } = this;
+    const own = (await allBrokers(services.database.db)).flatMap(({ rigId, address, status }) =>
+      services.stations.get(rigId) === null || status === null ? [] : [{ labels: { rig: rigId, address }, status }],
+    );
+    const each = (name: string, help: string, value: (status: BrokerStatus) => number): Metric => ({
+      ...{ name, help, type: 'gauge' },
+      samples: own.map(({ labels, status }) => ({ labels, value: value(status) })),
+    });
+    const sum = (counts: readonly number[]) => counts.reduce((all, count) => all + count, 0);
+    return [
+      each('evenfall_broker_up', 'Whether an MQTT broker of a rig is connected.', ({ state }) => Number(state === 'connected')),
+      each('evenfall_broker_taken', 'Messages taken since the server listens.', ({ topics }) => sum(topics.map(({ taken }) => taken))),
+      each('evenfall_broker_refused', 'Messages refused likewise.', ({ topics }) => sum(topics.map(({ refused }) => refused))),
     ];
   }
 

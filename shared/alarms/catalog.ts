@@ -211,10 +211,17 @@ const kinds = {
     consequence: 'What it should have shown is not known.',
     answer: 'Look at the sensor, its battery and its way to the server.',
   },
+  'broker-away': {
+    ...morning,
+    onDelayS: 60,
+    title: 'MQTT broker away',
+    cause: 'A broker that fills channels of the rig has not answered for a minute.',
+    consequence: 'Those channels get nothing; what the broker does not keep for Evenfall is lost.',
+    answer: 'Look at the broker, at the network to it, and at the reason on the page of the rig. It is tried again by itself.',
+  },
   'late-finish': {
     ...morning,
-    onDelayS: 120,
-    offDelayS: 120,
+    ...{ onDelayS: 120, offDelayS: 120 },
     title: 'Run will pass the end of the night window',
     cause: 'Holds or bad dwells have moved the predicted finish beyond the hours of the room.',
     consequence: 'Cleaners, guards or the day’s work would meet a running rig.',
@@ -236,8 +243,7 @@ const kinds = {
     ...morning,
     // As before.
     rings: 'never',
-    momentary: true,
-    onDelayS: 0,
+    ...{ momentary: true, onDelayS: 0 },
     title: 'Scheduled start missed',
     cause: 'A start check stood against it, or no server drove the rig.',
     consequence: 'Nothing moved; the start is not made up for.',
@@ -254,8 +260,7 @@ const kinds = {
   },
   'disk-low': {
     ...morning,
-    onDelayS: 60,
-    offDelayS: 60,
+    ...{ onDelayS: 60, offDelayS: 60 },
     title: 'Disk nearly full',
     cause: 'Less than 10 % of the server’s disk is free.',
     consequence: 'When nothing more can be stored, runs are held.',
@@ -263,8 +268,7 @@ const kinds = {
   },
   'clock-stepped': {
     ...morning,
-    momentary: true,
-    onDelayS: 0,
+    ...{ momentary: true, onDelayS: 0 },
     title: 'Clock stepped',
     cause: 'The clock of the server or of the controller jumped.',
     consequence:

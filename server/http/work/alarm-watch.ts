@@ -7,15 +7,15 @@ import type { LinkEvent } from '../../interfaces/turntable-link';
 import { actOnAlarm, reportCondition, type AlarmPlace } from '../../store/alarms';
 import { dueAlarms, metAlarms, standingAlarms } from '../../store/alarms-read';
 import { writeHops } from '../../store/calls';
-import { limitsOfRig } from '../../store/channel-limits';
 import { allRigs, type RigRecord } from '../../store/rigs';
 import { channelsOfRun } from '../../store/runs-read';
 import { lastSampleUtcMs } from '../../store/sample-summaries';
 import type { Services } from '../services';
-import { excursionCondition, limitConditions } from './channel-conditions';
+import { excursionCondition } from './channel-conditions';
 import { heedNightWindow } from './late-finish';
 import { OutageCall } from './outage-call';
 import { conditionsOf, isSlow, isWatched, runNowOf, type Condition } from './rig-conditions';
+import { standingConditions } from './standing-conditions';
 import { delayOf, isNews, keyOf, together } from './told-conditions';
 
 /** How often the rigs are looked at when nothing happens, ms. */
@@ -168,7 +168,7 @@ export class AlarmWatch {
     const { db } = services.database;
     const known = await this.knownOf(rig.labId, rig.id);
     const utcMs = services.clock.utcMs();
-    const slow = await limitConditions(services.database, await limitsOfRig(db, rig.labId, rig.id), {
+    const slow = await standingConditions(services.database, rig, {
       utcMs,
       isMet: (code, subject) => known.met?.has(keyOf({ code, subject })) === true,
     });

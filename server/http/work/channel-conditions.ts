@@ -15,10 +15,15 @@ import type { Condition } from './rig-conditions';
 export const subjectOfLimit = (limitId: string) => `limit ${limitId}`;
 const codes = { level: 'channel-level', slope: 'channel-slope', silence: 'channel-silent' } as const;
 
+export interface LimitView {
+  utcMs: number;
+  isMet: (code: Condition['code'], subject: string) => boolean;
+}
+
 export async function limitConditions(
   connection: Connection,
   limits: readonly LimitRecord[],
-  { utcMs, isMet }: { utcMs: number; isMet: (code: Condition['code'], subject: string) => boolean },
+  { utcMs, isMet }: LimitView,
 ): Promise<Condition[]> {
   const found: Condition[] = [];
   for (const { id, limit, channelId, channelName, unit, labId } of limits) {

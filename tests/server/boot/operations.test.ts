@@ -1,6 +1,8 @@
 import { sql } from 'drizzle-orm';
 import request from 'supertest';
+import { demoIds } from '@/db/demo/seed';
 import { createLog } from '@/server/boot/create-log';
+import { insertBroker, tellBrokerStatus } from '@/server/store/brokers';
 import { metricsText } from '@/server/http/metrics';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer } from '@/tests/support/lab-server';
@@ -33,11 +35,19 @@ test('healthz says that the process lives, readyz that it can serve and drives i
 
 test('figures for Prometheus, on loopback alone and not beside the application', async () => {
   await lab.as('viewer', 'GET', '/health').expect(200);
+  const { db } = lab.services.database;
+  const place = { labId: demoIds.lab, rigId: demoIds.rig, address: 'mqtt://sensors.lan', userName: null, password: null, topics: [] };
+  const broker = await insertBroker(db, { ...place, madeAt: lab.clock.utcMs(), madeBy: 'Ott' });
+  const heard = { taken: 7, refused: 2, last: null, lastRefused: null };
+  await tellBrokerStatus(db, broker, { state: 'away', since: lab.nowIso(), reason: null, toldAt: lab.nowIso(), topics: [heard, heard] });
   const response = await fetch(metricsAt);
   expect(response.headers.get('content-type')).toBe('text/plain; version=0.0.4');
   const text = await response.text();
   expect(text).toMatch(/^evenfall_database_up 1$/m);
   expect(text).toMatch(/^evenfall_rig_link_ready\{rig="[0-9a-f-]{36}",name="North bench"\} 1$/m);
+  expect(text).toMatch(/^evenfall_broker_up\{rig="[0-9a-f-]{36}",address="mqtt:\/\/sensors\.lan"\} 0$/m);
+  expect(text).toMatch(/^evenfall_broker_taken\{.*\} 14$/m);
+  expect(text).toMatch(/^evenfall_broker_refused\{.*\} 4$/m);
   expect(text).toMatch(/^evenfall_http_answer_seconds_count\{method="GET",status="2xx"\} [1-9]/m);
   // The form of the lines, after the exposition format 0.0.4.
   for (const line of text.trim().split('\n'))

@@ -3,6 +3,7 @@ import { demoIds, seedDemo } from '@/db/demo/seed';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import type { Services } from '@/server/http/services';
 import { AlarmWatch } from '@/server/http/work/alarm-watch';
+import { insertBroker, removeBroker, tellBrokerStatus } from '@/server/store/brokers';
 import { addLimit } from '@/server/store/channel-limits';
 import { createSampleStore } from '@/server/store/sample-store';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
@@ -83,6 +84,45 @@ test('a disk that is nearly full is told after a minute, and is over when there 
   await looks(watch);
   expect(await alarmOf('disk-low')).toMatchObject({ state: 'returned-unacknowledged' });
   free = null;
+});
+
+test('a broker is told of once it has been away for a minute, by what the server that listens said of it a moment ago', async () => {
+  const watch = watchOf();
+  const { db } = database().connection;
+  const air = { name: 'box air', role: 'environment', unit: 'degC', rateHz: 0.1 } as const;
+  const topics = [{ filter: 'air', channel: air, valuePath: null, time: null, timeUS: 1 }];
+  const place = { labId: demoIds.lab, rigId: demoIds.rig, address: 'mqtt://sensors.lan:1883', userName: null, password: null };
+  const broker = await insertBroker(db, { ...place, topics, madeAt: clock.utcMs(), madeBy: 'Ott' });
+  const since = new Date(clock.utcMs()).toISOString();
+  const says = (state: 'away' | 'connected') => {
+    const status = {
+      state,
+      since,
+      reason: state === 'away' ? 'no answer in 10 s' : null,
+      toldAt: new Date(clock.utcMs()).toISOString(),
+      topics: [],
+    };
+    return tellBrokerStatus(db, broker, status);
+  };
+  await says('away');
+  await looks(watch);
+  await clock.advance(59_000);
+  await says('away');
+  await looks(watch);
+  expect(await alarmOf('broker-away')).toMatchObject({ state: 'normal' });
+  await clock.advance(2_000);
+  await looks(watch);
+  expect(await alarmOf('broker-away')).toMatchObject({
+    ...{ state: 'active-unacknowledged', rings: 'morning', rigId: demoIds.rig },
+    words: `mqtt://sensors.lan:1883 does not answer since ${since.slice(11, 19)} UTC: no answer in 10 s. Nothing comes into box air.`,
+  });
+  // Nobody listens any more: what was said is not of now.
+  await clock.advance(70_000);
+  await looks(watch);
+  await clock.advance(3_000);
+  await looks(watch);
+  expect(await alarmOf('broker-away')).toMatchObject({ state: 'returned-unacknowledged' });
+  await removeBroker(db, { ...place, id: broker.id, at: clock.utcMs(), by: 'Ott' });
 });
 
 test('a channel that had samples and has none for longer than its limit is told, until one comes; another watch knows of it', async () => {

@@ -112,15 +112,32 @@ test('more than a minute may hold is refused and told', async () => {
   expect((await valuesOf('flood')).length).toBe(view.status?.topics[0]?.taken);
 }, 60_000);
 
+/** Turns until the alarm of the broker that fills `lasting` is in this state. */
+async function alarmIs(state: string): Promise<string> {
+  let found: { state: string; code: string; words: string } | undefined;
+  for (let turns = 0; turns < 150; turns += 1) {
+    await lab.advance(1_000);
+    for (let breath = 0; breath < 20; breath += 1) await new Promise<void>((resolve) => void setImmediate(resolve));
+    const { body } = await lab.as('viewer', 'GET', `/labs/${demoIds.lab}/alarms`).expect(200);
+    found = (body.items as (typeof found & {})[]).find(({ code, words }) => code === 'broker-away' && words.endsWith('into lasting.'));
+    if (found?.state === state) return found.words;
+  }
+  throw new Error(`the alarm is never ${state}: ${JSON.stringify(found)}`);
+}
+
 test('a broker that vanishes is told and comes back by itself; a removed one is left alone', async () => {
   const id = await listen(timed('lasting', 'lasting'));
   await broker.stop();
   const away = await seen(id, ({ status }) => status?.state === 'away' && status.reason === 'nothing listens at this address');
   expect(away.status?.topics[0]?.taken).toBe(0);
+  expect(await alarmIs('active-unacknowledged')).toBe(
+    `${broker.address} does not answer since ${away.status?.since.slice(11, 19) ?? ''} UTC: nothing listens at this address. Nothing comes into lasting.`,
+  );
   broker = await broker.again();
   await seen(id, ({ status }) => status?.state === 'connected');
   await broker.say('lasting', message(7, ago(0)), { qos: 1 });
   await seen(id, ({ status }) => status?.topics[0]?.taken === 1);
+  await alarmIs('returned-unacknowledged');
   const { items } = (await lab.as('viewer', 'GET', base).expect(200)).body as { items: BrokerView[] };
   for (const each of items) await lab.as('owner', 'DELETE', `${base}/${each.id}`).expect(204);
   await lab.as('owner', 'DELETE', `${base}/${id}`).expect(404);
