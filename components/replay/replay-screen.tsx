@@ -2,6 +2,7 @@ import { router, useLocalSearchParams, type Href } from 'expo-router';
 import { useMemo, useState } from 'react';
 import { View } from 'react-native';
 import { useLab, useLabQuery, wordsOf } from '@/components/api';
+import { useFrames } from '@/components/cameras/use-cameras';
 import { PlanView, stepsOfLog, SwingStrip, type Series } from '@/components/charts';
 import { reducedMotion } from '@/components/charts/use-smooth-angle';
 import { toRad } from '@/components/runs/deflection-series';
@@ -12,6 +13,7 @@ import { getRun, listSteps, type RunView, type StepRowView } from '@/shared/cont
 import { formatDeflection, formatDegrees } from '@/shared/lib/format-angle';
 import { formatClock, zoneName } from '@/shared/lib/format-time';
 import { momentAt, neighbourStart } from './moment';
+import { ReplayCamera } from './replay-camera';
 import { TimeSlider } from './time-slider';
 import { usePlayer } from './use-player';
 
@@ -66,6 +68,7 @@ const paces: { value: Pace; label: string }[] = [
 function Night({ view, rows, measured, startUtcMs }: NightProps) {
   const { timeZone } = useLab();
   const wide = useWide();
+  const frames = useFrames(view.id);
   const [pace, setPace] = useState<Pace>('60');
   const strip = useMemo(() => stepsOfLog(rows), [rows]);
   const fromUtcMs = strip[0]?.startUtcMs ?? 0;
@@ -97,6 +100,7 @@ function Night({ view, rows, measured, startUtcMs }: NightProps) {
           </Label>
         </View>
       </Panel>
+      <ReplayCamera runId={view.id} frames={frames} atUtcMs={atUtcMs} />
       <Panel className="gap-2">
         <SwingStrip
           steps={strip}

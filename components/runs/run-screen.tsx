@@ -3,6 +3,7 @@ import { useEffect, useRef } from 'react';
 import { View } from 'react-native';
 import { isProblem, useLab, wordsOf } from '@/components/api';
 import { Chip, Label, Loading, Panel, ProblemNotice, Screen, useWide } from '@/components/ui';
+import { RunCameras } from '@/components/cameras/run-cameras';
 import type { RunView } from '@/shared/contracts/runs';
 import { PositionFacts } from '@/components/rigs/position-facts';
 import { LockedNotice } from '@/components/rigs/lock-panel';
@@ -81,7 +82,12 @@ function LiveScreen({ view, live }: { view: RunView; live: LiveRun }) {
   const afterDwell = <AfterDwell view={view} timeZone={timeZone} serverNowMs={serverNowMs} onTap={() => tap('hold-after-dwell')} />;
   const finish = <FinishEarly view={view} timeZone={timeZone} />;
   const isFinishing = view.finishing !== null && view.finishing.withdrawnBy === null;
-  const around = view.rehearsal ? null : <Surroundings view={view} serverNowMs={serverNowMs} />;
+  const around = view.rehearsal ? null : (
+    <>
+      <Surroundings view={view} serverNowMs={serverNowMs} />
+      <RunCameras rigId={view.rigId} />
+    </>
+  );
   const log = <RecentSteps runId={view.id} protocol={view.protocol} rows={state.rows} timeZone={timeZone} count={wide ? 7 : 4} />;
   return (
     <Screen

@@ -2,6 +2,7 @@ import { useLocalSearchParams, type Href } from 'expo-router';
 import { useEffect, useMemo, useState } from 'react';
 import { View } from 'react-native';
 import { addressOf, useLab, useLabQuery, wordsOf } from '@/components/api';
+import { useFrames } from '@/components/cameras/use-cameras';
 import { excludedPart } from '@/components/data/stretch';
 import { useExclusions } from '@/components/data/exclusion-list';
 import { Empty, FilterGroup, Label, Loading, Panel, ProblemNotice, Screen, Select, Tabs, useWide } from '@/components/ui';
@@ -54,6 +55,7 @@ export function StepLogScreen() {
           events={events.data ?? []}
           protocol={run.data?.data.protocol ?? null}
           timeZone={timeZone}
+          over={over}
           first={row === undefined ? null : Number(row)}
         />
       )}
@@ -77,11 +79,12 @@ interface LoggedStepsProps extends Pick<StepListProps, 'rows' | 'protocol'> {
   runId: string;
   events: readonly ChainedEvent[];
   timeZone: string;
+  over: boolean;
   /** The row that a link leads to: open, and scrolled to. */
   first: number | null;
 }
 
-function LoggedSteps({ runId, rows, events, protocol, timeZone, first }: LoggedStepsProps) {
+function LoggedSteps({ runId, rows, events, protocol, timeZone, over, first }: LoggedStepsProps) {
   const wide = useWide();
   const [filter, setFilter] = useState<StepFilter>(noFilter);
   const [zone, setZone] = useState<'lab' | 'utc'>('lab');
@@ -92,6 +95,7 @@ function LoggedSteps({ runId, rows, events, protocol, timeZone, first }: LoggedS
   const shown = useMemo(() => filterSteps(rows, filter), [rows, filter]);
   const exclusions = useExclusions(runId);
   const notes = useStepNotes(runId);
+  const frames = useFrames(runId, over ? undefined : everyMs);
   const list: StepListProps = {
     rows: shown,
     protocol,
@@ -101,7 +105,9 @@ function LoggedSteps({ runId, rows, events, protocol, timeZone, first }: LoggedS
       return stretch === null ? null : excludedPart(exclusions.exclusions, stretch);
     },
     noted: (row) => notes.notes.filter(({ seq }) => seq === row.seq).length,
-    details: (row) => <StepDetails {...{ runId, row, events, timeZone, exclusions, notes }} />,
+    details: (row) => (
+      <StepDetails {...{ runId, row, events, timeZone, exclusions, notes }} frames={frames.filter(({ seq }) => seq === row.seq)} />
+    ),
     open,
     onOpen: setOpen,
   };
