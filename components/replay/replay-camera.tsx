@@ -28,15 +28,15 @@ export function ReplayCamera({ runId, frames, atUtcMs }: ReplayCameraProps) {
   useAhead(runId, name === undefined ? [] : frames.filter(({ camera }) => camera === name), frame);
   if (name === undefined) return null;
   return (
-    <Panel className="gap-2" testID="replay-camera">
+    <Panel className="gap-2 wide:flex-1" testID="replay-camera">
       {names.length === 1 ? null : (
         <Tabs label="Camera" value={name} options={names.map((value) => ({ value, label: value }))} onChange={setChosen} />
       )}
       {frame === null ? (
         <Label>{name} has no frame yet at this moment.</Label>
       ) : (
-        <View className="flex-row items-center gap-4">
-          <View className="w-[168px] wide:w-[320px]">
+        <View className="flex-row items-center gap-4 wide:flex-col wide:items-start wide:gap-2">
+          <View className="w-[168px] wide:w-[264px]">
             <FramePicture runId={runId} frame={frame} testID="replay-picture" />
           </View>
           <View className="min-w-0 shrink gap-1">

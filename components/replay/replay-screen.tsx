@@ -82,25 +82,27 @@ function Night({ view, rows, measured, startUtcMs }: NightProps) {
   const step = (by: 1 | -1) => go(neighbourStart(rows, atUtcMs, by) ?? (by === 1 ? toUtcMs : fromUtcMs));
   return (
     <View className="gap-4">
-      <Panel className={wide ? 'flex-row items-center gap-8' : 'flex-row items-center gap-4'}>
-        <PlanView rig={view.rig} angleDeg={angleDeg} sizePx={wide ? 260 : 132} />
-        <View className="min-w-0 shrink gap-2">
-          <Num size={24} testID="replay-clock">
-            {formatClock(atUtcMs, { timeZone, precision: 'seconds' })}
-          </Num>
-          <Label>{zoneName(timeZone)}</Label>
-          <Body testID="replay-step">
-            {row === null ? 'Before the first step' : between ? 'Held, between two steps' : stepTitle(row, view.protocol)}
-          </Body>
-          <Label>
-            turntable <Num size={13}>{formatDegrees(angleDeg)}</Num>
-          </Label>
-          <Label>
-            deflection <Num size={13}>{formatDeflection(rad)}</Num>
-          </Label>
-        </View>
-      </Panel>
-      <ReplayCamera runId={view.id} frames={frames} atUtcMs={atUtcMs} />
+      <View className="gap-4 wide:flex-row">
+        <Panel className={wide ? 'flex-1 flex-row items-center gap-8' : 'flex-row items-center gap-4'}>
+          <PlanView rig={view.rig} angleDeg={angleDeg} sizePx={wide ? (frames.length === 0 ? 260 : 200) : 132} />
+          <View className="min-w-0 shrink gap-2">
+            <Num size={24} testID="replay-clock">
+              {formatClock(atUtcMs, { timeZone, precision: 'seconds' })}
+            </Num>
+            <Label>{zoneName(timeZone)}</Label>
+            <Body testID="replay-step">
+              {row === null ? 'Before the first step' : between ? 'Held, between two steps' : stepTitle(row, view.protocol)}
+            </Body>
+            <Label>
+              turntable <Num size={13}>{formatDegrees(angleDeg)}</Num>
+            </Label>
+            <Label>
+              deflection <Num size={13}>{formatDeflection(rad)}</Num>
+            </Label>
+          </View>
+        </Panel>
+        <ReplayCamera runId={view.id} frames={frames} atUtcMs={atUtcMs} />
+      </View>
       <Panel className="gap-2">
         <SwingStrip
           steps={strip}
