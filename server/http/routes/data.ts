@@ -83,7 +83,7 @@ export const dataRoutes = [
       enterAudit(handle, context, {
         kind: 'run.data-imported',
         data: {
-          ...{ runId: run.id, importId: file.id, channelName, stored },
+          ...{ runId: run.id, importId: file.id, fileName: file.fileName, sha256: file.sha256, channelName, stored },
           ...(other === 0 ? {} : { other, sameInstant: choices.sameInstant }),
           ...(leftOut === 0 ? {} : { leftOut }),
         },

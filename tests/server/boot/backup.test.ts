@@ -9,6 +9,7 @@ import { main, type Restored } from '@/server/boot/backup';
 import { main as verifyAudit } from '@/server/boot/audit-verify';
 import { createSampleStore } from '@/server/store/sample-store';
 import { tablesOf } from '@/server/store/whole-database';
+import { FakeS3 } from '@/tests/support/fake-s3';
 import { freshDatabase, type TestDatabase } from '@/tests/support/database';
 import { announceFile } from '@/server/store/files';
 import { beginImport } from '@/server/store/import-files';
@@ -61,10 +62,13 @@ async function keepFile(name: string, text: string): Promise<void> {
   writeFileSync(fileOf(states.lab, name), bytes);
 }
 
-async function run(database: TestDatabase, stateDir: string, ...args: string[]) {
+const run = (database: TestDatabase, stateDir: string, ...args: string[]) =>
+  runWith({ DATABASE_URL: database.url, EVENFALL_STATE_DIR: stateDir }, ...args);
+
+async function runWith(environment: Record<string, string>, ...args: string[]) {
   const said = { out: '', err: '' };
   const output = { out: (text: string) => void (said.out += text), err: (text: string) => void (said.err += text) };
-  const code = await main(args, { DATABASE_URL: database.url, EVENFALL_STATE_DIR: stateDir }, { output, nowUtcMs });
+  const code = await main(args, environment, { output, nowUtcMs });
   return { code, ...said };
 }
 
@@ -109,6 +113,25 @@ test('it is put back into an empty database: every row, the files that were brou
   expect(statSync(fileOf(states.other, 'night')).mode & 0o777).toBe(0o600);
   const silent = { out: () => undefined, err: () => undefined };
   expect(await verifyAudit({ DATABASE_URL: other.url, EVENFALL_STATE_DIR: states.other }, silent)).toBe(0);
+});
+
+test('files go from a folder into a bucket where that is configured at the restore, and from there into the next backup', async () => {
+  const fake = new FakeS3();
+  const place = { EVENFALL_S3_BUCKET: 'nights', EVENFALL_S3_ENDPOINT: await fake.listen() };
+  const bucket = {
+    ...place,
+    EVENFALL_S3_KEY_ID: fake.keyId,
+    EVENFALL_S3_SECRET: 'test-secret',
+    DATABASE_URL: other.url,
+    EVENFALL_STATE_DIR: states.other,
+  };
+  expect(await runWith(bucket, 'restore', file, '--replace')).toMatchObject({ code: 0, err: '' });
+  expect(fake.kept.get('/nights/imports/night')?.toString()).toBe(broughtIn);
+  const again = join(folder, 'again.tar.gz');
+  const said = await runWith(bucket, 'backup', again);
+  expect(said).toMatchObject({ code: 0, err: '' });
+  expect(JSON.parse(said.out)).toMatchObject({ files: 2 });
+  await fake.close();
 });
 
 test('a database with something in it is not thrown away by mistake, and a spoilt file changes nothing', async () => {

@@ -83,6 +83,8 @@ describe('a file in parts', () => {
     expect(await count('import_pieces', id)).toBe(0);
     expect((await check(id).expect(200)).body.ok).toBe(true);
     await commit(id, 'in parts').expect(200);
+    const audit = await lab.as('owner', 'GET', `${labPath}/audit?kind=run`).expect(200);
+    expect(JSON.stringify(audit.body.items)).toContain(sha256(text));
   });
 
   test('a part elsewhere than at the end of what has come is refused, and told where that is', async () => {
