@@ -15,6 +15,13 @@ export interface BudgetQuestion {
   observed: readonly ObservedTerm[];
   /** Relative change of G by the offset between turntable axis and fibre; null where the rig states none. */
   axisOffset: { value: number; u: number; relative: number } | null;
+  /** Observed inputs that err together; absent: none do. */
+  correlations?: readonly Correlation[];
+}
+
+export interface Correlation {
+  of: readonly [ObservedTerm['input'], ObservedTerm['input']];
+  r: number;
 }
 
 export interface ObservedTerm {
@@ -30,6 +37,7 @@ export interface Budget {
   /** Infinity where only values without stated degrees of freedom count. */
   degreesOfFreedom: number;
   terms: BudgetTerm[];
+  correlations: readonly Correlation[];
 }
 
 /** One input of the budget with what the published line leaves out. */
@@ -47,18 +55,38 @@ export interface BudgetTerm {
 /**
  * The budget (JCGM 100:2008, 5): each sensitivity is the derivative of the whole solution, κ and the ring-down's correction
  * included. Where the derivative vanishes, as at the greatest torque, what the second order does is put in its place. Inputs of one
- * group share their error fully, so their contributions add with their signs.
+ * group share their error fully, so their contributions add with their signs. What was observed together errs together (5.2): lines of
+ * their own hold what that adds to the square of u, or takes from it.
  */
 export function budgetOf(question: BudgetQuestion): Budget {
   const observed = question.observed.map(({ input, known, sensitivity }) => term(input, known, { slope: sensitivity }));
   const terms = [...rigTerms(question), ...observed, ...axisTerm(question)];
-  const all = Math.hypot(...terms.map(({ line }) => line.contribution));
+  const together = (question.correlations ?? []).map((one) => ({ ...one, square: squareTogether(terms, one) }));
+  const added = together.reduce((sum, { square }) => sum + square, 0);
+  const all = terms.reduce((sum, { line }) => sum + line.contribution ** 2, 0) + added;
   const joined = joinGroups(terms);
-  const u = Math.hypot(...joined.map(({ contribution }) => contribution));
-  const lines = terms
-    .map(({ line }) => ({ ...line, share: all === 0 ? 0 : (line.contribution / all) ** 2 }))
-    .sort((a, b) => b.contribution - a.contribution);
-  return { lines, u, degreesOfFreedom: effectiveDegreesOfFreedom(joined), terms };
+  const u = Math.sqrt(Math.max(0, joined.reduce((sum, { contribution }) => sum + contribution ** 2, 0) + added));
+  const shareOf = (square: number) => (all > 0 ? square / all : 0);
+  const lines = [
+    ...terms.map(({ line }) => ({ ...line, share: shareOf(line.contribution ** 2) })),
+    ...together
+      .filter(({ square }) => square !== 0)
+      .map(({ of: [a, b], r, square }) => ({
+        input: `correlation.${a}.${b}`,
+        value: r,
+        u: 0,
+        sensitivity: 0,
+        contribution: Math.sqrt(Math.abs(square)),
+        share: shareOf(square),
+      })),
+  ].sort((a, b) => b.contribution - a.contribution);
+  return { lines, u, degreesOfFreedom: effectiveDegreesOfFreedom(joined), terms, correlations: question.correlations ?? [] };
+}
+
+/** 2 cᵢ cⱼ uᵢ uⱼ r (JCGM 100:2008, 5.2.2). */
+function squareTogether(terms: readonly BudgetTerm[], { of, r }: Correlation): number {
+  const [a, b] = of.map((input) => terms.find(({ line }) => line.input === input)?.signed ?? 0) as [number, number];
+  return 2 * r * a * b;
 }
 
 type Stated = Known & Pick<Quantity, 'group' | 'distribution'>;

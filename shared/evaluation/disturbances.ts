@@ -1,5 +1,5 @@
 import { factorise, applyQTransposed, sumOfSquares, type QrFactors } from '../statistics/least-squares';
-import { biweight, huberWeight, median, robustScale } from '../statistics/robust';
+import { biweight, biweightSlope, huberSlope, huberWeight, median, robustScale } from '../statistics/robust';
 import { cosine, ringDownSegment, sine } from '../statistics/ring-down';
 import { SingularMatrixError } from '../statistics/symmetric';
 import type { DwellFit } from './ring-down-fit';
@@ -9,6 +9,17 @@ import { dataOf, type Segment } from './segment';
 export interface Disturbance {
   trust: Float64Array | null;
   knocksS: readonly number[];
+  /** Sums over the data of trust, and of how fast a trusted residual changes with the residual. */
+  sums: { trust: number; slope: number };
+}
+
+const greatestLoosening = 2;
+
+/** How many times more the errors of the data move the fit than its weights say (Huber 1981, 6.6, from memory); 1 where all data count in full. */
+export function looseningOf(disturbances: readonly Disturbance[] | null): number {
+  const sum = (key: 'trust' | 'slope') => (disturbances ?? []).reduce((all, { sums }) => all + sums[key], 0);
+  const [trust, slope] = [sum('trust'), sum('slope')];
+  return trust === 0 ? 1 : Math.min(greatestLoosening, Math.max(1, slope > 0 ? trust / slope : greatestLoosening));
 }
 
 /** Residuals are judged only where one of them leaves the scale this far, so that an undisturbed night keeps all its data in full. */
@@ -36,14 +47,14 @@ export function judged(segments: readonly Segment[], found: DwellFit, round: num
   const disturbed = round > 0 || pooled.some((value) => Math.abs(value) > noticed * scale);
   if (!disturbed) {
     const knocks = knocksOf(segments, { excess, scale, alpha: found.fit.alpha });
-    return knocks.some((own) => own.length > 0) ? knocks.map((knocksS) => ({ trust: null, knocksS })) : null;
+    return knocks.some((own) => own.length > 0) ? knocks.map((knocksS) => ({ trust: null, knocksS, sums: { trust: 0, slope: 0 } })) : null;
   }
   const weighed = excess.map((one) => trustOf(one, { scale, gently: round < 2 }));
-  const trusted = segments.map((segment, i) => ({ ...segment, trust: weighed[i] as Float64Array }));
+  const trusted = segments.map((segment, i) => ({ ...segment, trust: weighed[i]?.trust as Float64Array }));
   const knocks = knocksOf(trusted, { excess, scale, alpha: found.fit.alpha }).map((own, i) =>
     own.filter((atS) => isHeld(trusted[i] as Segment, atS)),
   );
-  return weighed.map((trust, i) => ({ trust, knocksS: knocks[i] as number[] }));
+  return weighed.map((one, i) => ({ ...one, knocksS: knocks[i] as number[] }));
 }
 
 /** Trust in full that must lie to either side of a knock, in data. */
@@ -58,10 +69,17 @@ function isHeld({ averages: { t }, trust }: Segment, atS: number): boolean {
 /** A segment of which the biweight would leave less than this share is weighed by Huber's rule, which takes nothing away altogether. */
 const leastTrust = 0.3;
 
-function trustOf(excess: Float64Array, { scale, gently }: { scale: number; gently: boolean }): Float64Array {
+function trustOf(
+  excess: Float64Array,
+  { scale, gently }: { scale: number; gently: boolean },
+): Pick<Disturbance, 'sums'> & { trust: Float64Array } {
   const strict = excess.map((value) => biweight(value / scale));
   const kept = strict.reduce((sum, value) => sum + value, 0) / strict.length;
-  return gently || kept < leastTrust ? excess.map((value) => Math.max(1e-9, huberWeight(value / scale))) : strict;
+  const soft = gently || kept < leastTrust;
+  const trust = soft ? excess.map((value) => Math.max(1e-9, huberWeight(value / scale))) : strict;
+  const slopes = excess.map((value) => (soft ? huberSlope : biweightSlope)(value / scale));
+  const total = (values: Float64Array) => values.reduce((sum, value) => sum + value, 0);
+  return { trust, sums: { trust: total(trust), slope: total(slopes) } };
 }
 
 /** Root of the mean square of the data about their means, for one sample. */

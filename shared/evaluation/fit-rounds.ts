@@ -7,13 +7,13 @@ import { type RingDownStart } from '../statistics/ring-down-start';
 import { spotOfAngle, withZero, type ChannelScale } from './channel-scale';
 import { curvatureBias, withoutBias } from './curvature';
 import { averagedAngles, type DwellSamples } from './dwell-samples';
-import { judged, type Disturbance } from './disturbances';
+import { judged, looseningOf, type Disturbance } from './disturbances';
 import { combine, type MeasuredOscillator } from './free-oscillator';
 import { gSystem } from './g-system';
 import type { EvaluationPlan } from './registration';
 import { reversalOf, isMember } from './reversal';
 import { dataOf, type Segment } from './segment';
-import { centreOf, fitRingDown, type DwellFit, type FitBias, type HeldOscillation } from './ring-down-fit';
+import { centreOf, fitRingDown, loosened, type DwellFit, type FitBias, type HeldOscillation } from './ring-down-fit';
 import { freeAt, solveG, stiffnessShifts, type GSolution, type GSystem } from './solve-g';
 import type { Analysis } from './analysis';
 
@@ -169,7 +169,8 @@ function fitOnce(question: FitQuestion, { scale, averages, start, shifts, bias, 
     trust: disturbances?.[i]?.trust ?? null,
   }));
   const data = segments.map(dataOf);
-  const raw = data.length === 0 ? null : fitRingDown(data, start, heldOf(measured));
+  const fitted = data.length === 0 ? null : fitRingDown(data, start, heldOf(measured));
+  const raw = fitted === null ? null : loosened(fitted, looseningOf(disturbances));
   const found = raw === null || bias === null ? raw : withoutBias(raw, bias);
   const free = combine(found?.ringDown ?? null, measured);
   if (free === null) {

@@ -44,6 +44,8 @@ export const gBasisSchema = z.strictObject({
   ]),
   /** `reversal` null: too few dwells to judge their scatter by, so there is no budget. */
   known: z.strictObject({ reversal: knownSchema.nullable(), period: knownSchema, decayTime: knownSchema.nullable() }),
+  /** Correlation coefficients of what the same dwells tell; absent in evaluations of older versions, and where nothing rang. */
+  together: z.strictObject({ reversalPeriod: z.number(), reversalDecayTime: z.number(), periodDecayTime: z.number() }).optional(),
 });
 export type GBasis = z.infer<typeof gBasisSchema>;
 

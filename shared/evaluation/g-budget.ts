@@ -6,13 +6,13 @@ import type { RigDocument } from '../rig/document';
 import type { Law } from '../statistics/draws';
 import type { Analysis } from './analysis';
 import { axisOffsetOf } from './axis-offset';
-import { budgetOf, derivative, type Budget, type BudgetTerm, type ObservedTerm } from './budget';
+import { budgetOf, derivative, type Budget, type BudgetTerm, type Correlation, type ObservedTerm } from './budget';
 import { budgetInputs, derivativeStep } from './budget-inputs';
 import { reread } from './channel-scale';
 import type { Known } from './free-oscillator';
 import { fromStored, type GBasis } from './g-basis';
 import { gSystem } from './g-system';
-import type { TrialModel } from './monte-carlo';
+import type { TrialInput, TrialModel } from './monte-carlo';
 import type { ModulationOutcome } from './modulation-method';
 import type { PeriodOutcome } from './period-method';
 import { NoSolutionError, solveG } from './solve-g';
@@ -61,8 +61,18 @@ export function supposedG(documented: RigDocument, basis: GBasis, supposed: Supp
     lever: basis.scale.kind === 'spot',
     observed: observedTerms(gOf, { reversal, period, decayTime }),
     axisOffset: axisOffsetOf(rig),
+    correlations: correlationsOf(basis),
   });
   return { bigG, budget };
+}
+
+function correlationsOf({ together }: GBasis): Correlation[] {
+  if (together === undefined) return [];
+  return [
+    { of: ['reversal_rad', 'period_s'], r: together.reversalPeriod },
+    { of: ['reversal_rad', 'decayTime_s'], r: together.reversalDecayTime },
+    { of: ['period_s', 'decayTime_s'], r: together.periodDecayTime },
+  ];
 }
 
 /** The budget of G by the time of swing: what the frequencies leave open stands in the line of the period. */
@@ -185,9 +195,29 @@ export function trialModelOf(
       law: lawOf(one),
       group: one.group,
       logSlope: one.slope / solution.bigG,
+      ...mixOf(one.line.input, budget.correlations),
     })),
     core: coreOf(rig, analysis),
   };
+}
+
+/** Of what independent deviates that of an input is made, where it errs together with inputs drawn before it (Cholesky). */
+function mixOf(input: string, correlations: readonly Correlation[]): Pick<TrialInput, 'mix'> {
+  const order = ['reversal_rad', 'period_s', 'decayTime_s'] as const;
+  const row = order.findIndex((name) => name === input);
+  if (row < 1 || correlations.length === 0) return {};
+  const r = (i: number, j: number) => correlations.find(({ of }) => of[0] === order[j] && of[1] === order[i])?.r ?? 0;
+  const factors: number[][] = [[1]];
+  for (let i = 1; i <= row; i += 1) {
+    const own: number[] = [];
+    for (let j = 0; j < i; j += 1) {
+      const known = factors[j] as number[];
+      const before = own.reduce((sum, factor, k) => sum + factor * (known[k] as number), 0);
+      own.push((r(i, j) - before) / (known[j] as number));
+    }
+    factors.push([...own, Math.sqrt(Math.max(0.01, 1 - own.reduce((sum, factor) => sum + factor * factor, 0)))]);
+  }
+  return { mix: (factors[row] as number[]).map((factor, k) => ({ input: order[k] as string, factor })) };
 }
 
 function lawOf({ nu, rectangular }: BudgetTerm): Law {

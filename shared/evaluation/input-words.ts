@@ -22,6 +22,9 @@ const inWords: Record<string, string> = {
   'stations.far': 'angle of far',
   'measured.period_s': 'period, sources away',
   'measured.decayTime_s': 'decay time, sources away',
+  'correlation.reversal_rad.period_s': 'near − far and period err together',
+  'correlation.reversal_rad.decayTime_s': 'near − far and decay time err together',
+  'correlation.period_s.decayTime_s': 'period and decay time err together',
 };
 
 /** What an input of the budget is called for people; the path itself where there is no word for it. */

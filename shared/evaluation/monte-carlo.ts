@@ -13,6 +13,8 @@ export interface TrialInput {
   group: string | null;
   /** ∂ ln G/∂input of the whole evaluation. */
   logSlope: number;
+  /** Deviates of inputs, its own last, that its deviate is made of; absent: its own alone. */
+  mix?: { input: string; factor: number }[];
 }
 
 export interface TrialModel {
@@ -86,8 +88,8 @@ interface Part {
   set: Setter | null;
   /** What the closed form lacks of the whole evaluation's ∂ ln G/∂input. */
   lacking: number;
-  /** Position of the deviate. */
-  draw: number;
+  /** Positions of the deviates, each with its factor. */
+  draws: { at: number; factor: number }[];
 }
 
 function trialOf(model: TrialModel): (draw: (law: Law) => number) => number {
@@ -98,8 +100,10 @@ function trialOf(model: TrialModel): (draw: (law: Law) => number) => number {
   return (draw) => {
     for (let k = 0; k < laws.length; k += 1) deviates[k] = draw(laws[k] as Law);
     let exponent = 0;
-    for (const { input, set, lacking, draw: k } of parts) {
-      const change = input.u * (deviates[k] as number);
+    for (const { input, set, lacking, draws } of parts) {
+      let deviate = 0;
+      for (const { at, factor } of draws) deviate += factor * (deviates[at] as number);
+      const change = input.u * deviate;
       set?.(input.value + change);
       exponent += lacking * change;
     }
@@ -110,6 +114,7 @@ function trialOf(model: TrialModel): (draw: (law: Law) => number) => number {
 function partsOf(model: TrialModel, core: TrialCore | null, reference: number): { laws: Law[]; parts: Part[] } {
   const laws: Law[] = [];
   const groups = new Map<string, number>();
+  const drawOf = new Map<string, number>();
   const parts = model.inputs
     .filter(({ u }) => u > 0)
     .map((input): Part => {
@@ -117,7 +122,19 @@ function partsOf(model: TrialModel, core: TrialCore | null, reference: number): 
       const known = input.group === null ? undefined : groups.get(input.group);
       const draw = known ?? laws.push(input.law) - 1;
       if (input.group !== null) groups.set(input.group, draw);
-      return { input, set, draw, lacking: input.logSlope - (core === null || set === null ? 0 : slopeOf(core, input, { set, reference })) };
+      drawOf.set(input.input, draw);
+      const mix = input.mix ?? [{ input: input.input, factor: 1 }];
+      // What is known exactly draws nothing, so nothing errs together with it.
+      const draws = mix.flatMap(({ input: name, factor }) => {
+        const place = drawOf.get(name);
+        return place === undefined ? [] : [{ at: place, factor }];
+      });
+      return {
+        input,
+        set,
+        draws,
+        lacking: input.logSlope - (core === null || set === null ? 0 : slopeOf(core, input, { set, reference })),
+      };
     });
   return { laws, parts };
 }

@@ -98,11 +98,11 @@ function groupsOf(segments: readonly Segment[], found: DwellFit): Group[] {
   return byAngle.map((own) => {
     const data = own.map((segment) => ringDownSegment({ ...dataOf(segment), shift: 0 }));
     const fit = fitSeparable(data, start, { allowed: isOscillation });
-    const covariance = honestCovariance(fit);
+    const covariance = honestCovariance(fit).map((row) => row.map((value) => found.loosening ** 2 * value));
     return {
       angleDeg: own.reduce((sum, { window }) => sum + (window.angleDeg ?? 0), 0) / own.length,
       segments: own,
-      found: { fit, bias: null, ringDown: found.ringDown, alphaCovariance: covariance },
+      found: { fit, bias: null, ringDown: found.ringDown, alphaCovariance: covariance, loosening: found.loosening },
       omega: fit.alpha[0] as number,
       gamma: fit.alpha[1] as number,
       variances: [at(covariance, 0, 0), at(covariance, 1, 1)],

@@ -8,11 +8,11 @@ import {
 } from '../statistics/drift';
 import { walkDifference } from '../statistics/gls-drift';
 import { walkScatter } from '../statistics/wandering-zero';
-import { bilinear } from '../statistics/symmetric';
+import { at, bilinear } from '../statistics/symmetric';
 import { lengthS } from './dwell-windows';
 import type { Segment } from './segment';
 import type { Known } from './free-oscillator';
-import { centreOf, type DwellFit } from './ring-down-fit';
+import { centreOf, ownSteps, type DwellFit } from './ring-down-fit';
 
 /** Near minus far of a run's dwells, drift removed. */
 export interface Reversal {
@@ -21,6 +21,8 @@ export interface Reversal {
   value: number;
   /** Null where too few dwells remain to judge the scatter by. */
   known: Known | null;
+  /** Covariance with the ω (rad/s) and the γ (1/s) of the ring-down; null where that told neither. */
+  withRingDown: [number, number] | null;
   count: number;
   /** ABA was asked for and could not be used. */
   notAlternating: boolean;
@@ -59,9 +61,46 @@ export function reversalOf(
       estimate.u === null
         ? null
         : { value: estimate.value, u: Math.sqrt(estimate.u ** 2 + coherent), nu: estimate.degreesOfFreedom ?? Infinity },
+    withRingDown: found.ringDown === null ? null : covarianceWith(found, { series, indices, ...estimate }, common),
     count,
     notAlternating: drift.kind === 'aba' && !alternates,
   };
+}
+
+/** From so many dwells on they show by themselves how centre and period err together. */
+const enoughTogether = 8;
+
+/**
+ * How the difference errs together with ω and γ, which the same dwells tell: by the centres, which were fitted with them, and by what moves
+ * both within a dwell, as a zero that walks does. The latter from each dwell's own departure from its neighbours and its own say about ω and γ.
+ */
+function covarianceWith(
+  found: DwellFit,
+  {
+    series,
+    indices,
+    weights,
+    value,
+  }: { series: readonly SidedValue[]; indices: readonly number[]; weights: readonly number[]; value: number },
+  common: readonly number[],
+): [number, number] {
+  const coherent = [0, 1].map((j) => common.reduce((sum, one, i) => sum + one * at(found.alphaCovariance, i, j), 0));
+  const own = [0, 0];
+  if (series.length >= enoughTogether) {
+    const steps = ownSteps(found.fit);
+    const free = series.map((one) => ({ atS: one.timeS, rad: one.value - (one.side * value) / 2 }));
+    free.forEach(({ atS, rad }, k) => {
+      const [before, after] = [free[k - 1], free[k + 1]];
+      const expected =
+        before === undefined || after === undefined
+          ? ((before ?? after)?.rad ?? rad)
+          : before.rad + ((after.rad - before.rad) * (atS - before.atS)) / (after.atS - before.atS);
+      const step = steps[indices[k] as number] as number[];
+      for (const j of [0, 1])
+        own[j] = (own[j] as number) + (weights[k] as number) * (rad - expected) * found.loosening * (step[j] as number);
+    });
+  }
+  return [(coherent[0] as number) + (own[0] as number), (coherent[1] as number) + (own[1] as number)];
 }
 
 function differenceOf(series: readonly SidedValue[], drift: { kind: string; order: number }, alternates: boolean): DifferenceEstimate {

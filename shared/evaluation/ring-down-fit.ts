@@ -51,6 +51,15 @@ export interface DwellFit {
   ringDown: RingDownResult | null;
   /** Covariance of the (ω, γ) that the centres were fitted with. */
   alphaCovariance: Matrix;
+  /** How many times more the errors of the data move (ω, γ) than the weights of the fit say. */
+  loosening: number;
+}
+
+/** The same fit where the errors of the data move it so many times as much as its weights say. */
+export function loosened(found: DwellFit, by: number): DwellFit {
+  if (found.ringDown === null || by === 1) return found;
+  const alphaCovariance = found.alphaCovariance.map((row) => row.map((value) => by * by * value));
+  return { ...found, alphaCovariance, loosening: by, ringDown: { ...found.ringDown, covariance: alphaCovariance } };
 }
 
 /** Ringing that explains less than this many times what noise alone would is none. */
@@ -72,6 +81,7 @@ export function fitRingDown(data: readonly RingDownData[], start: RingDownStart 
       return {
         fit,
         bias: null,
+        loosening: 1,
         alphaCovariance,
         ringDown: {
           ...shiftDerivatives(fit),
@@ -87,6 +97,7 @@ export function fitRingDown(data: readonly RingDownData[], start: RingDownStart 
   return {
     fit: solveAtFixedAlpha(segments, [measured.omega, measured.gamma]),
     bias: null,
+    loosening: 1,
     ringDown: null,
     alphaCovariance: measured.covariance,
   };
@@ -138,17 +149,22 @@ function straightResidual({ tS, y, weight }: RingDownData): number {
 export function honestCovariance(fit: SeparableFit): Matrix {
   const count = fit.segments.length;
   if (count < 4) return fit.alphaCovariance;
+  const steps = ownSteps(fit);
+  const between = fit.alpha.map((_, i) =>
+    fit.alpha.map((__, j) => (count / (count - 2)) * steps.reduce((sum, step) => sum + (step[i] as number) * (step[j] as number), 0)),
+  );
+  return at(between, 0, 0) > at(fit.alphaCovariance, 0, 0) ? between : fit.alphaCovariance;
+}
+
+/** By how much each segment alone moves (ω, γ). */
+export function ownSteps(fit: SeparableFit): number[][] {
   const inverse = fit.alpha.map((_, j) =>
     solveSymmetric(
       fit.information,
       fit.alpha.map((__, i) => (i === j ? 1 : 0)),
     ),
   );
-  const steps = fit.segments.map(({ score }) => inverse.map((row) => row.reduce((sum, value, i) => sum + value * (score[i] as number), 0)));
-  const between = fit.alpha.map((_, i) =>
-    fit.alpha.map((__, j) => (count / (count - 2)) * steps.reduce((sum, step) => sum + (step[i] as number) * (step[j] as number), 0)),
-  );
-  return at(between, 0, 0) > at(fit.alphaCovariance, 0, 0) ? between : fit.alphaCovariance;
+  return fit.segments.map(({ score }) => inverse.map((row) => row.reduce((sum, value, i) => sum + value * (score[i] as number), 0)));
 }
 
 function shiftDerivatives(fit: SeparableFit): Pick<RingDownResult, 'omegaByShift' | 'gammaByShift'> {

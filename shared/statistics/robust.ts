@@ -16,6 +16,14 @@ export function biweight(z: number): number {
   return Math.abs(share) >= 1 ? 0 : (1 - share * share) ** 2;
 }
 
+/** How fast weight times residual changes with the residual: less than the weight, which is why an error of the data moves the fit more than the weights alone say. */
+export const huberSlope = (z: number): number => (Math.abs(z) <= huberLimit ? 1 : 0);
+
+export function biweightSlope(z: number): number {
+  const square = (z / biweightLimit) ** 2;
+  return square >= 1 ? 0 : (1 - square) * (1 - 5 * square);
+}
+
 /** Standard deviation of a normal law with the median of |residual| of these. */
 export function robustScale(residuals: Float64Array): number {
   return normalMad * median(residuals.map(Math.abs));
