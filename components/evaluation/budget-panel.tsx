@@ -2,7 +2,7 @@ import { useState } from 'react';
 import { View } from 'react-native';
 import { BudgetBars } from '@/components/charts';
 import { Body, Button, Label, Num, Section } from '@/components/ui';
-import { inputWords, unitOfInput } from '@/shared/evaluation/input-words';
+import { inputWords, isCorrelation, unitOfInput } from '@/shared/evaluation/input-words';
 import { monteCarloWords } from '@/shared/evaluation/monte-carlo-words';
 import type { BudgetLine, EvaluationResult } from '@/shared/evaluation/result';
 import { formatPercent, UNIT_OF_G, unitSign } from '@/shared/lib/format-number';
@@ -71,7 +71,8 @@ function BudgetTable({ lines, rig }: { lines: readonly BudgetLine[]; rig: RigDoc
 }
 
 function BudgetRow({ line, unit }: { line: BudgetLine; unit: string }) {
-  const value = uncertainParts({ value: line.value, u: line.u, unit });
+  const together = isCorrelation(line.input);
+  const value = uncertainParts({ value: line.value, u: together ? null : line.u, unit });
   return (
     <tr className="border-b border-line" data-testid="budget-row">
       <th scope="row" className={`${cell} text-left`}>
@@ -81,13 +82,13 @@ function BudgetRow({ line, unit }: { line: BudgetLine; unit: string }) {
         </View>
       </th>
       <td className={right}>
-        <Num className="whitespace-nowrap">{value.value + value.uncertainty + value.factor}</Num>
+        <Num className="whitespace-nowrap">{`${together ? 'r = ' : ''}${value.value}${value.uncertainty}${value.factor}`}</Num>
         <Label>{value.unit}</Label>
       </td>
       <td className={right}>
-        <Num className="whitespace-nowrap">{scientific(line.sensitivity)}</Num>
+        <Num className="whitespace-nowrap">{together ? '–' : scientific(line.sensitivity)}</Num>
         <Label>
-          {UNIT_OF_G}
+          {together ? '' : UNIT_OF_G}
           {unit === '' ? '' : ` per ${unitSign(unit)}`}
         </Label>
       </td>

@@ -1,4 +1,4 @@
-import { inputWords, unitOfInput } from '@/shared/evaluation/input-words';
+import { inputWords, isCorrelation, unitOfInput } from '@/shared/evaluation/input-words';
 import { driftWords, sameSamplesWords } from '@/shared/evaluation/method-words';
 import { monteCarloWords } from '@/shared/evaluation/monte-carlo-words';
 import { residualAllan } from '@/shared/evaluation/residual-allan';
@@ -112,7 +112,7 @@ function budgetPart(page: ReportPage, { result: { budget }, rig }: ReportInput):
   page.bars(lines.slice(0, longestBars).map(({ input, share }) => ({ words: inputWords(input), share, figure: formatPercent(share) })));
   const rows = lines.map(({ input, value, u, contribution, share }) => [
     inputWords(input),
-    formatUncertain({ value, u, unit: unitOfInput(input, rig) }),
+    isCorrelation(input) ? `r = ${formatFixed(value, { decimals: 2 })}` : formatUncertain({ value, u, unit: unitOfInput(input, rig) }),
     formatExact({ value: contribution, unit: UNIT_OF_G }),
     formatPercent(share),
   ]);

@@ -32,6 +32,9 @@ export const inputWords = (input: string): string => inWords[input] ?? input;
 
 const knownUnits: Record<string, string> = { reversal_rad: 'rad', modulation_rad: 'rad', period_s: 's', decayTime_s: 's' };
 
+/** A line of the budget that holds no input but how two of them err together: its value is a correlation coefficient, without u and sensitivity. */
+export const isCorrelation = (input: string): boolean => input.startsWith('correlation.');
+
 /** Unit of a budget line: that of the rig's quantity at the path. */
 export function unitOfInput(input: string, rig: RigDocument | null): string {
   const known = knownUnits[input];

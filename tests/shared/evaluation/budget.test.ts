@@ -1,4 +1,4 @@
-import type { EvaluationResult } from '@/shared/evaluation/result';
+import type { BudgetLine, EvaluationResult } from '@/shared/evaluation/result';
 import type { RigDocument } from '@/shared/rig/document';
 import { relativeDifference } from '../../support/check-data';
 import { evaluateNight } from '../../support/evaluate-night';
@@ -99,9 +99,10 @@ describe('the budget', () => {
   test('adds up: contribution is sensitivity times u, shares sum to one, u of G is the root of the sum of squares', () => {
     const { result } = evaluateNight({ ...wide, rig: uncertain });
     const lines = result.budget ?? [];
-    for (const one of lines) expect(one.contribution).toBeCloseTo(Math.abs(one.sensitivity) * one.u, 25);
+    for (const one of lines.filter(({ input }) => !input.startsWith('correlation.')))
+      expect(one.contribution).toBeCloseTo(Math.abs(one.sensitivity) * one.u, 25);
     expect(lines.reduce((sum, { share }) => sum + share, 0)).toBeCloseTo(1, 12);
-    const root = Math.sqrt(lines.reduce((sum, { contribution }) => sum + contribution ** 2, 0));
+    const root = Math.sqrt(lines.reduce((sum, { contribution, share }) => sum + Math.sign(share) * contribution ** 2, 0));
     expect(relativeDifference(result.G?.u ?? NaN, root)).toBeLessThan(1e-12);
     expect(relativeDifference(result.relativeU ?? NaN, (result.G?.u ?? NaN) / (result.G?.value ?? NaN))).toBeLessThan(1e-12);
     expect(lines.map(({ input }) => input)).toEqual(
@@ -118,6 +119,29 @@ describe('the budget', () => {
     );
     // Geometry of a tenth of a millimetre decides: 0.377 % from the orbit and 0.115 % from the arm.
     expect(relativeDifference(result.relativeU ?? NaN, Math.hypot(0.0037718604, 0.0011497145, 6.25e-5))).toBeLessThan(4e-3);
+  });
+
+  test('near minus far and the period of the same dwells err together: a line says by how much, and Monte Carlo trials find the same u', () => {
+    const normal = normalDeviates(19);
+    const unmeasured = withRig(wideRig(), (r) => void delete r.measured);
+    const { result } = evaluateNight(
+      { ...wide, rig: unmeasured, anglesDeg: alternatingAngles(24, near, -near), reading: (angle) => angle + 5e-6 * normal() },
+      { trials: 100_000 },
+    );
+    const lines = new Map((result.budget ?? []).map((line) => [line.input, line]));
+    const [difference, period] = ['reversal_rad', 'period_s'].map((input) => lines.get(input)) as [BudgetLine, BudgetLine];
+    const together = lines.get('correlation.reversal_rad.period_s') as BudgetLine;
+    // A period found too long makes a difference found too small (ringing in opposite senses), and G goes with S/T²: both lower it.
+    expect(together.value).toBeLessThan(-0.1);
+    expect(together.value).toBeGreaterThan(-0.7);
+    expect(together.share).toBeGreaterThan(0);
+    // JCGM 100:2008, 5.2.2: 2 r cᵢ cⱼ uᵢ uⱼ.
+    const square = 2 * together.value * difference.sensitivity * difference.u * period.sensitivity * period.u;
+    expect(relativeDifference(together.contribution ** 2, square)).toBeLessThan(1e-9);
+    // Trials draw from Student's laws, whose spread is greater by √(ν/(ν − 2)).
+    const ratio = (result.monteCarlo?.G_u ?? NaN) / (result.G?.u ?? NaN);
+    expect(ratio).toBeGreaterThan(0.99);
+    expect(ratio).toBeLessThan(1.08);
   });
 
   test('lets inputs of one group share their error, so that it adds or cancels', () => {
