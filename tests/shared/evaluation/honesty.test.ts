@@ -13,7 +13,7 @@ test('of 30 nights at least 25 hold the true G in their interval, without a bias
   // Three standard deviations of the mean of 30.
   expect(Math.abs(nights.reduce((sum, { pull }) => sum + pull, 0) / 30)).toBeLessThan(3 / Math.sqrt(30));
   expect(nights.filter(({ result }) => result.alignment?.clockOffset_s != null)).toHaveLength(30);
-  // On a rig measured so well it is near minus far that these nights judge, with enough dwells to tell its zero's walk from noise.
+  // On a rig measured so well it is near minus far before all else that these nights judge, with enough dwells to tell its zero's walk from noise.
   const share = ({ result }: (typeof nights)[number]) => result.budget?.find(({ input }) => input === 'reversal_rad')?.share ?? 0;
-  expect(wellMeasured.reduce((sum, night) => sum + share(night), 0) / 12).toBeGreaterThan(0.5);
+  expect(wellMeasured.reduce((sum, night) => sum + share(night), 0) / 12).toBeGreaterThan(0.4);
 }, 240_000);
