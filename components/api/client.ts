@@ -43,9 +43,13 @@ export function addressOf(route: RouteContract, input: { params?: Record<string,
   return `/api${path}${query === '' ? '' : `?${query}`}`;
 }
 
+/** Of a kind of which there are several, a picture for instance, the body says which it is. */
+const typeOf = (raw: Blob | string, consumes = 'application/octet-stream') =>
+  consumes.endsWith('/*') && raw instanceof Blob ? raw.type : consumes;
+
 function headersOf<R extends RouteContract>(route: R, input: CallInput<R>): Headers {
   const headers = new Headers({ accept: route.produces ?? 'application/json, application/problem+json' });
-  if (input.raw !== undefined) headers.set('content-type', route.consumes ?? 'application/octet-stream');
+  if (input.raw !== undefined) headers.set('content-type', typeOf(input.raw, route.consumes));
   else if (input.body !== undefined) headers.set('content-type', 'application/json');
   if (input.deviceToken !== undefined) headers.set('authorization', `Bearer ${input.deviceToken}`);
   if (input.ifMatch !== undefined) headers.set('if-match', input.ifMatch);

@@ -1,4 +1,5 @@
 import { useQueryClient } from '@tanstack/react-query';
+import { useRouter, type Href } from 'expo-router';
 import { useState } from 'react';
 import { View } from 'react-native';
 import { labKey, serverNowMs, useLab, useLabMutation, useMay, wordsOf } from '@/components/api';
@@ -15,6 +16,7 @@ import { useCameras, usePictureAddress } from './use-cameras';
 export function CamerasPanel({ rig }: { rig: RigView }) {
   const { labId } = useLab();
   const queries = useQueryClient();
+  const router = useRouter();
   const mayManage = useMay('tokens.manage').ok;
   const cameras = useCameras(rig.id);
   const refresh = () => void queries.invalidateQueries({ queryKey: labKey(labId, listCameras) });
@@ -33,6 +35,12 @@ export function CamerasPanel({ rig }: { rig: RigView }) {
         {mayManage && found !== undefined ? (
           <Button icon="plus" label="Add a camera" className="self-start" onPress={() => setAdding(true)} testID="add-camera" />
         ) : null}
+        <Button
+          label="Send pictures with this device"
+          className="self-start"
+          onPress={() => router.push(`/rigs/${rig.id}/send-pictures` as Href)}
+          testID="to-send-pictures"
+        />
       </Panel>
       {adding && found !== undefined ? (
         <CameraSheet

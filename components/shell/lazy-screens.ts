@@ -50,6 +50,7 @@ export const RigsScreen = screen('RigsScreen');
 export const RunScreen = screen('RunScreen');
 export const RunningBar = screen('RunningBar');
 export const RunsScreen = screen('RunsScreen');
+export const SendPicturesScreen = screen('SendPicturesScreen');
 export const SpotScreen = screen('SpotScreen');
 export const StartScreen = screen('StartScreen');
 export const StationsScreen = screen('StationsScreen');

@@ -25,4 +25,5 @@ export { RunningBar } from '@/components/runs/running-bar';
 export { RunsScreen } from '@/components/runs/runs-screen';
 export { CompareRunsScreen } from '@/components/runs/compare-screen';
 export { StepLogScreen } from '@/components/runs/step-log-screen';
+export { SendPicturesScreen } from '@/components/cameras/send-pictures-screen';
 export { SpotScreen } from '@/components/spot/spot-screen';

@@ -1,18 +1,18 @@
-import { useEffect, useState } from 'react';
+import { useEffect } from 'react';
 import { View } from 'react-native';
 import { useLab } from '@/components/api';
 import { Body, Button, Icon, Label, Panel, ProblemNotice, Section, Select } from '@/components/ui';
 import { formatClock } from '@/shared/lib/format-time';
 import { isSamePicture, usualRegion } from '@/shared/spot/setting';
-import { browserCamera } from './camera';
 import { PictureView } from './picture-view';
 import type { CameraState } from './spot-reader';
+import { useDeviceCameras } from './use-device-cameras';
 import type { SpotPage } from './use-spot-reader';
 
 /** The camera and its picture; the region is drawn in it. */
 export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: number | null; onLine: (px: number) => void }) {
   const { reader, view, setting, change, place } = page;
-  const cameras = useCameras(view.camera.kind);
+  const cameras = useDeviceCameras(view.camera.kind);
   const { picture, spot } = view;
   const isOpen = view.camera.kind === 'open' || view.camera.kind === 'lost';
   const opened = view.camera.kind === 'open' ? view.camera.id : null;
@@ -97,24 +97,4 @@ function CameraNotice({ camera }: { camera: CameraState }) {
       </View>
     </Panel>
   );
-}
-
-/** The cameras of this device, looked for anew whenever one comes or goes. */
-function useCameras(state: CameraState['kind']): { id: string; name: string }[] {
-  const [cameras, setCameras] = useState<{ id: string; name: string }[]>([]);
-  useEffect(() => {
-    let live = true;
-    const look = () =>
-      void browserCamera(() => null)
-        .list()
-        .then((found) => (live ? setCameras(found) : undefined));
-    look();
-    const media = (navigator as { mediaDevices?: MediaDevices }).mediaDevices;
-    media?.addEventListener('devicechange', look);
-    return () => {
-      live = false;
-      media?.removeEventListener('devicechange', look);
-    };
-  }, [state]);
-  return cameras;
 }

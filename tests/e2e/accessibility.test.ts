@@ -70,6 +70,12 @@ function places(): Place[] {
       arrives: 'spot-screen',
       first: says('spot-missing', 'open the camera'),
     },
+    {
+      name: 'send-pictures',
+      path: `${rig}/send-pictures`,
+      arrives: 'send-pictures-screen',
+      first: async (hand) => void (await hand.reads('send-missing', 'open the camera')),
+    },
     { name: 'link', path: `${rig}/link`, arrives: 'link-screen', first: (hand) => hand.tapsOn('Serial line', 'radio') },
     {
       name: 'first-move',
@@ -110,6 +116,7 @@ function places(): Place[] {
     { name: 'schedule', path: '/calendar', arrives: 'calendar-screen', first: opened('schedule-a-run', 'schedule-confirm') },
     { name: 'lab', path: '/lab', arrives: 'lab-screen', first: says('on-call', 'Whoever') },
     { name: 'on-call', path: '/lab', arrives: 'lab-screen', first: opened('change-on-call', 'on-call-sheet') },
+    { name: 'camera', path: rig, arrives: 'rig-screen', first: opened('add-camera', 'camera-sheet') },
     { name: 'limit', path: rig, arrives: 'rig-screen', first: opened('add-limit', 'limit-sheet') },
     {
       name: 'audit',
