@@ -64,18 +64,8 @@ function places(): Place[] {
     { name: 'rig', path: rig, arrives: 'rig-screen' },
     { name: 'stations', path: `${rig}/stations`, arrives: 'torque-plot' },
     { name: 'rig-revisions', path: `${rig}/revisions`, arrives: '' },
-    {
-      name: 'light-spot',
-      path: `${rig}/light-spot`,
-      arrives: 'spot-screen',
-      first: says('spot-missing', 'open the camera'),
-    },
-    {
-      name: 'send-pictures',
-      path: `${rig}/send-pictures`,
-      arrives: 'send-pictures-screen',
-      first: async (hand) => void (await hand.reads('send-missing', 'open the camera')),
-    },
+    { name: 'light-spot', path: `${rig}/light-spot`, arrives: 'spot-missing' },
+    { name: 'send-pictures', path: `${rig}/send-pictures`, arrives: 'send-missing' },
     { name: 'link', path: `${rig}/link`, arrives: 'link-screen', first: (hand) => hand.tapsOn('Serial line', 'radio') },
     {
       name: 'first-move',
