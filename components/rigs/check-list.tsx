@@ -18,7 +18,7 @@ export function CheckList({ checks }: { checks: readonly StartCheck[] }) {
     <Panel className="py-1" testID="start-checks">
       {sorted.map((check, index) => (
         <View
-          key={check.code}
+          key={`${check.code} ${String(index)}`}
           className={`flex-row items-start gap-3 py-3 ${index === 0 ? '' : 'border-t border-line'}`}
           testID={`check-${check.code}`}
         >

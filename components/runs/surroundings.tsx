@@ -5,6 +5,7 @@ import { Body, Label, Num, Panel, Section } from '@/components/ui';
 import { listChannels, readSamples, type ChannelView } from '@/shared/contracts/data';
 import type { RunView } from '@/shared/contracts/runs';
 import { formatReading } from '@/shared/lib/format-angle';
+import { formatFixed, withUnit } from '@/shared/lib/format-number';
 import { formatAgo } from '@/shared/lib/format-duration';
 
 const everyMs = 15_000;
@@ -34,12 +35,13 @@ function Surrounding({ channel, view, serverNowMs }: { channel: ChannelView; vie
   const samples = useLabQuery(readSamples, { ...asked, everyMs });
   const { utcMs, value } = samples.data?.data ?? { utcMs: [], value: [] };
   const [first, last, newest] = [utcMs[0], utcMs.at(-1), value.at(-1)];
+  const reading = readingIn(channel.unit, value);
   const gapMs = Math.max(silentMs, channel.rateHz === null ? 0 : (1000 * silentIntervals) / channel.rateHz);
   return (
     <View className="gap-1" testID={`surrounding-${channel.name}`}>
       <View className="flex-row flex-wrap items-baseline justify-between gap-x-3">
         <Body className="min-w-0 shrink">{channel.name}</Body>
-        {newest === undefined ? null : <Num strong>{formatReading(newest, channel.unit)}</Num>}
+        {newest === undefined ? null : <Num strong>{reading(newest)}</Num>}
       </View>
       {first === undefined || last === undefined ? (
         <Label>{samples.isPending ? 'Loading' : 'Nothing in this run yet.'}</Label>
@@ -53,11 +55,19 @@ function Surrounding({ channel, view, serverNowMs }: { channel: ChannelView; vie
             gapMs={Math.max(gapMs, (4 * (last - first)) / points)}
           />
           <Label>
-            {formatReading(Math.min(...value), channel.unit)} to {formatReading(Math.max(...value), channel.unit)} in this run
+            {reading(Math.min(...value))} to {reading(Math.max(...value))} in this run
             {serverNowMs - last > gapMs ? `; silent, last sample ${formatAgo((serverNowMs - last) / 1000)}` : ''}
           </Label>
         </>
       )}
     </View>
   );
+}
+
+/** Readings of a channel with as many decimals as tell its least from its greatest. */
+function readingIn(unit: string, value: readonly number[]): (reading: number) => string {
+  const span = Math.max(...value) - Math.min(...value);
+  if (!(span > 0)) return (reading) => formatReading(reading, unit);
+  const decimals = Math.min(6, Math.max(0, 1 - Math.floor(Math.log10(span))));
+  return (reading) => withUnit(formatFixed(reading, { decimals }), unit);
 }

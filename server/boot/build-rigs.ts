@@ -124,7 +124,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
   });
 
   const guided = buildGuided({ clock, linkOf, arms, locks, onLine, supervisor });
-  const keyTurns = new KeyTurns();
+  const keyTurns = new KeyTurns(clock);
   const heed = heedLinks({ arms, arming, guided, soak, keyTurns }, wiring, () => clock.utcMs());
 
   /** Two drivers on one rig would be worse than none. */

@@ -47,12 +47,14 @@ export interface CalendarSpan {
   timeZone: string;
   fromUtcMs: number;
   untilUtcMs: number;
+  /** Of this rig alone; absent: of all. */
+  rigId?: string;
 }
 
 /** Every start of a lab in a span: what became of those that were due, and what stands against those to come. */
 export async function calendarOf(db: Handle, span: CalendarSpan): Promise<CalendarItem[]> {
-  const { labId, timeZone, fromUtcMs, untilUtcMs } = span;
-  const schedules = await allSchedules(db, labId);
+  const { labId, timeZone, fromUtcMs, untilUtcMs, rigId } = span;
+  const schedules = (await allSchedules(db, labId)).filter((schedule) => rigId === undefined || schedule.rigId === rigId);
   const rigs = new Map((await listRigs(db, labId)).map((rig) => [rig.id, rig]));
   const rooms = await hoursOfRooms(db, labId);
   const decided = new Map<string, StartRow>();

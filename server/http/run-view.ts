@@ -123,8 +123,10 @@ function waitingViewOf({ kind, text, givesUpUtcMs, otherwise, firstLookUtcMs, fo
 async function factsOfStored(services: Services, run: RunRecord): Promise<RunFacts> {
   const planned = plannedRun(run.start, startUtcMsOf(run));
   const snapshot = restored(run.snapshot, run.chartVersion);
-  if (snapshot !== null)
-    return factsOf({
+  const quarantined = services.supervisor.quarantinedOf(run.rigId);
+  const why = quarantined?.start.runId === run.id ? quarantined.why : null;
+  if (snapshot !== null) {
+    const facts = factsOf({
       start: run.start,
       snapshot,
       nowUtcMs: services.clock.utcMs(),
@@ -134,11 +136,14 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
       predictedEndUtcMs: run.predictedEndAt,
       planned,
     });
+    // What is stored is not what goes on: nobody drives it, and the page says why.
+    return why === null ? facts : { ...facts, reason: why };
+  }
   const steps = await readSteps(services.database.db, { labId: run.labId, runId: run.id });
   return {
     runId: run.id,
     state: run.state,
-    reason: run.failure ?? services.supervisor.quarantinedOf(run.rigId)?.why ?? '',
+    reason: run.failure ?? why ?? '',
     reasonCode: '',
     startedAtUtcMs: run.startedAt,
     endedAtUtcMs: run.endedAt,

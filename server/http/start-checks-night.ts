@@ -30,8 +30,8 @@ const roomCheck: Asked<StartCheck> = async ({ db }, { rig, timeZone }, { startUt
 
 /** Of two runs on one rig only one can be: the start that comes while this one goes on is missed. */
 const scheduleCheck: Asked<StartCheck> = async ({ db }, { rig, timeZone }, { startUtcMs, endUtcMs }) => {
-  const coming = await calendarOf(db, { labId: rig.labId, timeZone, fromUtcMs: startUtcMs, untilUtcMs: endUtcMs });
-  const first = coming.find(({ rigId, state, dueAt }) => rigId === rig.id && state === 'planned' && Date.parse(dueAt) > startUtcMs);
+  const coming = await calendarOf(db, { labId: rig.labId, rigId: rig.id, timeZone, fromUtcMs: startUtcMs, untilUtcMs: endUtcMs });
+  const first = coming.find(({ state, dueAt }) => state === 'planned' && Date.parse(dueAt) > startUtcMs);
   if (first === undefined) return [];
   const due = formatDayAndClock(Date.parse(first.dueAt), timeZone);
   return [

@@ -53,7 +53,15 @@ export function formatPercent(share: number, digits = 2): string {
   return `${formatSignificant(share * 100, digits)}${NARROW_SPACE}%`;
 }
 
-const UNIT_SIGNS: Record<string, string> = { urad: 'µrad', m3: 'm³', 'kg.m2': `kg${NARROW_SPACE}m²`, deg: '°', 'N.m': `N${NARROW_SPACE}m` };
+const UNIT_SIGNS: Record<string, string> = {
+  urad: 'µrad',
+  m3: 'm³',
+  'kg.m2': `kg${NARROW_SPACE}m²`,
+  deg: '°',
+  degC: '°C',
+  Cel: '°C',
+  'N.m': `N${NARROW_SPACE}m`,
+};
 
 /** Unit of G. */
 export const UNIT_OF_G = `m³${NARROW_SPACE}kg⁻¹${NARROW_SPACE}s⁻²`;

@@ -150,7 +150,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     });
     expect(await sent.json()).toMatchObject({ stored: 6 });
     await hand.page.reload();
-    await hand.reads('surroundings', /19\.25 °C.*19\.20 °C to .*19\.25 °C in this run/);
+    await hand.reads('surroundings', /19\.250 °C.*19\.200 °C to .*19\.250 °C in this run/);
     await hand.at('surroundings').scrollIntoViewIfNeeded();
     await hand.shoots('surroundings');
     await lab().pass(90);

@@ -1,6 +1,7 @@
 import * as contracts from '@/shared/contracts/standing';
 import { cautionsText, cautionsVersion } from '@/shared/rig/cautions';
 import type { ArmRequest } from '@/server/engine/arming';
+import type { KeyTurn } from '@/server/engine/key-turns';
 import { longestArmMs } from '@/server/store/arms';
 import type { PersonalLock } from '@/server/interfaces/lock-keeper';
 import { insertLock, liftLock, signaturesOf, signCautions, type LockRow } from '@/server/store/locks';
@@ -159,9 +160,10 @@ async function lift(context: LockCaller, why: string | null): Promise<void> {
   services.locks.lifted(rig.id, params.lockId);
 }
 
-/** A lock is lifted at the rig: a turn of its arm key shows it, for a tap alone could come from anywhere. */
-function assertAtTheRig({ stations, keyTurns, clock }: Services, rig: RigRecord): void {
-  if (keyTurns.turnedLately(rig.id, clock.utcMs())) return;
+/** A lock is lifted at the rig: a turn of its arm key since the lock was set shows it, for a tap alone could come from anywhere. */
+function assertAtTheRig({ stations, keyTurns }: Services, rig: RigRecord, setUtcMs: number): KeyTurn {
+  const turn = keyTurns.take(rig.id, setUtcMs);
+  if (turn !== null) return turn;
   const answers = stations.get(rig.id)?.link.health().condition === 'ready';
   throw new ProblemError(
     'not-ready',
@@ -185,15 +187,19 @@ const setLockRoutes = [
 const liftRoutes = [
   mount(contracts.liftLock, async (context) => {
     const rig = await load(context, context.params.rigId);
-    const { userId, name } = lockOf(context);
+    const { userId, name, setUtcMs } = lockOf(context);
     if (userId !== context.me.userId)
       throw new ProblemError(
         'not-allowed',
         `This is the personal lock of ${name}. Only ${name} lifts it, or an owner of the lab with a reason.`,
       );
-    assertAtTheRig(context.services, rig);
-    await lift(context, null);
-    context.services.keyTurns.spend(rig.id);
+    const turn = assertAtTheRig(context.services, rig, setUtcMs);
+    try {
+      await lift(context, null);
+    } catch (error) {
+      context.services.keyTurns.giveBack(rig.id, turn);
+      throw error;
+    }
     return undefined;
   }),
 
