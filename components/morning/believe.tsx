@@ -1,7 +1,7 @@
 import { View } from 'react-native';
 import { Body, Icon, Label, Num, Panel, type IconName } from '@/components/ui';
 import type { MorningSheet, MorningTick } from '@/shared/contracts/morning';
-import { lostWords } from '@/shared/morning/words';
+import { lostWords, dwellsIn } from '@/shared/morning/words';
 
 const marks: Record<'yes' | 'no' | 'open', { icon: IconName; tone: 'good' | 'danger' | 'dim'; said: string }> = {
   yes: { icon: 'tick', tone: 'good', said: 'right' },
@@ -35,7 +35,7 @@ export function GoodDwells({ dwells, lost }: Pick<MorningSheet, 'dwells' | 'lost
     <View className="gap-0.5" testID="good-dwells">
       <Body>
         <Num size={17}>
-          {dwells.good} of {dwells.planned}
+          {dwells.good} of {dwellsIn(dwells)}
         </Num>{' '}
         dwells are good{causes === '' ? ', ' : '; '}
         {total}

@@ -18,9 +18,12 @@ export function planWords({ plannedEndAt }: Pick<MorningSheet, 'plannedEndAt'>, 
   return `${formatDuration(Math.abs(lateS))} ${lateS > 0 ? 'after' : 'before'} the plan`;
 }
 
+/** How many dwells there were to be good: those planned, and those that made up for others. */
+export const dwellsIn = ({ planned, done }: MorningSheet['dwells']): number => Math.max(planned, done);
+
 /** `31 of 32 dwells are good; 12 min brought nothing that counts: held`. */
 export function dwellWords({ dwells, lost }: Pick<MorningSheet, 'dwells' | 'lost'>): string {
-  const good = `${dwells.good} of ${dwells.planned} dwells are good`;
+  const good = `${dwells.good} of ${dwellsIn(dwells)} dwells are good`;
   const { total, causes } = lostWords(lost);
   return causes === '' ? `${good}, ${total}` : `${good}; ${total}: ${causes}`;
 }

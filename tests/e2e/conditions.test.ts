@@ -106,6 +106,58 @@ tell('a device gets a token that is shown once, and revoking it ends it', async 
   await hand.page.getByTestId('device-token').waitFor({ state: 'detached' });
 });
 
+tell('a room that is too warm makes a dwell not good and never holds the run; the pair is made up', async () => {
+  const device = { name: 'thermometer', channels: [{ name: 'air', role: 'environment', unit: 'degC', rateHz: 0.1 }] };
+  const made = await lab().server.as('owner', 'POST', `/labs/${demoIds.lab}/rigs/${demoIds.rig}/devices`).send(device).expect(201);
+  const tells = async (value: number) => {
+    const line = JSON.stringify({ time_utc: new Date(lab().server.clock.utcMs() - 1).toISOString(), value });
+    const headers = { authorization: `Bearer ${String(made.body.secret)}`, 'content-type': 'application/x-ndjson' };
+    expect((await fetch(`${lab().address}/api/samples`, { method: 'POST', headers, body: line })).status).toBe(200);
+  };
+  await tells(21);
+  await lab().server.arm(20);
+  const warmId = await started(
+    lab(),
+    await issued(lab(), {
+      formatVersion: 1,
+      name: 'Warm room',
+      goodWhen: { channels: [{ channel: 'air', below: 22 }] },
+      evaluation: { method: 'equilibrium', drift: 'aba', channel: 'deflection' },
+      steps: [
+        { kind: 'home' },
+        { kind: 'swing', to: 'near' },
+        {
+          kind: 'repeat',
+          times: 1,
+          counting: 'good',
+          atMost: 3,
+          steps: [{ kind: 'swing', to: 'far' }, dwell, { kind: 'swing', to: 'near' }, dwell],
+        },
+      ],
+    }),
+  );
+  await hand.goes(`/runs/${warmId}`, 'run-screen');
+  const state = async (): Promise<string> => (await read(lab(), warmId)).state;
+  const seen = new Set<string>();
+  for (let strides = 0; strides < 80 && (await state()) !== 'finished'; strides += 1) {
+    // Too warm in the first pair.
+    await tells(strides < 12 ? 23.5 : 21);
+    await lab().pass(40);
+    seen.add(await state());
+  }
+  expect([...seen]).toEqual(['running', 'finished']);
+  await hand.at('result-screen').waitFor();
+  await hand.reads('good-dwells', /^[23] of 4/);
+  const { items } = await read(lab(), `${warmId}/steps`);
+  const dwells = (items as { kind: string; good: boolean | null }[]).filter(({ kind }) => kind === 'dwell').map(({ good }) => good);
+  expect(dwells[0]).toBe(false);
+  expect(dwells.slice(-2)).toEqual([true, true]);
+  expect(dwells).toHaveLength(4);
+  await hand.goes(`/runs/${warmId}/log`, 'step-log');
+  await hand.sees(/air/);
+  await hand.shoots('made-up');
+});
+
 tell('the editor offers what can be waited for', async () => {
   const { body } = await hand.asks('POST', '/protocols', { body: { document: waiting } });
   await hand.goes(`/protocols/${String(body.id)}`, 'editor');
