@@ -154,7 +154,7 @@ tell('a room that is too warm makes a dwell not good and never holds the run; th
   expect(dwells.slice(-2)).toEqual([true, true]);
   expect(dwells).toHaveLength(4);
   await hand.goes(`/runs/${warmId}/log`, 'step-log');
-  await hand.sees(/air/);
+  await hand.sees(/not good/);
   await hand.shoots('made-up');
 });
 
