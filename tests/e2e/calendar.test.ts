@@ -1,5 +1,4 @@
 import { demoIds } from '@/db/demo/seed';
-import { heedSchedules } from '@/server/http/work/scheduled-starts';
 import { formatDay } from '@/shared/lib/format-time';
 import { sizes, type Size } from '../support/browser';
 import { chapters, Hand } from './support/hand';
@@ -25,9 +24,8 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
 
   chapter('a run is scheduled for some nights of the week; its next starts are shown before', async () => {
     await hand.goes('/calendar', 'calendar-screen');
-    // The other size has left starts of today behind, of schedules that have ended.
-    if (size === 'phone') await hand.sees('Nothing is scheduled');
-    await hand.sees('None. Each start is made by hand.');
+    // What another size left behind is past or ended.
+    await hand.sees('Nothing is scheduled');
     await hand.taps('schedule-a-run');
     await hand.tapsOn('On days of the week', 'radio');
     await hand.taps('day-sat');
@@ -116,38 +114,6 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.at('schedule').waitFor({ state: 'detached' });
     await hand.sees('None. Each start is made by hand.');
     await lab().server.as('keeper', 'DELETE', `/labs/${demoIds.lab}/calendar-feed`).expect(204);
-  });
-
-  chapter('a start that is due on a rig that is not armed is missed and says why; on an armed one the run is there', async () => {
-    const starts = async (armed: boolean): Promise<void> => {
-      const dueUtcMs = Math.ceil(lab().server.clock.utcMs() / 60_000) * 60_000 + 120_000;
-      const [date = '', time = ''] = new Intl.DateTimeFormat('sv-SE', { timeZone: 'Europe/Zurich', dateStyle: 'short', timeStyle: 'short' })
-        .format(dueUtcMs)
-        .split(' ');
-      const asked = { rigId: demoIds.rig, protocolId: demoIds.shortProtocol, revision: 1, massSetId: demoIds.massSet };
-      await lab()
-        .server.as('operator', 'POST', `/labs/${demoIds.lab}/schedules`)
-        .send({ ...asked, plan: { kind: 'once', date, time } })
-        .expect(201);
-      if (armed) await lab().server.arm(20);
-      await lab().pass((dueUtcMs - lab().server.clock.utcMs()) / 1000 + 5);
-      await heedSchedules(lab().server.services);
-      await lab().pass(5);
-    };
-    await starts(false);
-    await hand.goes('/calendar', 'calendar-screen');
-    await hand.tapsOn('List', 'radio');
-    await hand.page.getByText('Missed').filter({ visible: true }).first().waitFor();
-    await hand.shoots('calendar-missed');
-    await starts(true);
-    await hand.goes('/runs', 'runs-screen');
-    await hand.shoots('started-by-schedule');
-    const { items } = (await lab().server.as('viewer', 'GET', `/labs/${demoIds.lab}/runs?active=true&limit=5`).expect(200)).body;
-    expect(items).toMatchObject([{ rigId: demoIds.rig, state: 'running' }]);
-    await hand.goes(`/runs/${String(items[0].id)}`, 'run-screen');
-    await hand.taps('stop');
-    await hand.at('result-screen').waitFor();
-    await hand.goes('/calendar', 'calendar-screen');
   });
 
   chapter('a card for the door is printed, and a page hangs there that says when to keep out', async () => {
