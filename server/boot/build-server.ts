@@ -93,6 +93,8 @@ class Life {
       this.refreshRegularly();
     }
     inside.tellTakenUp();
+    // It may have been ended while it was still taking rigs up: then nothing else begins.
+    if (this.stopped) return;
     // What could be slow comes after the rigs.
     inside.background.add(keepHouse(db, services.clock.utcMs()), 'keeping house');
     inside.background.add(tidyFiles(services), 'tidying files');

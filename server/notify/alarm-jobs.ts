@@ -1,5 +1,6 @@
 import * as z from 'zod';
-import { isAlarmCode, ringingOf } from '@/shared/alarms/catalog';
+import { isAlarmCode } from '@/shared/alarms/catalog';
+import { ringingOf } from '@/shared/alarms/ringing';
 import { answerAt, calleesOf, morningUtcMs, nextCallee, type Callee } from '@/shared/alarms/rings';
 import { formatClock } from '@/shared/lib/format-time';
 import type { JobHandlers } from '../interfaces/jobs';

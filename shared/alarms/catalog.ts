@@ -219,6 +219,14 @@ const kinds = {
     consequence: 'Those channels get nothing; what the broker does not keep for Evenfall is lost.',
     answer: 'Look at the broker, at the network to it, and at the reason on the page of the rig. It is tried again by itself.',
   },
+  'camera-away': {
+    ...morning,
+    onDelayS: 60,
+    title: 'Camera away',
+    cause: 'A camera of the rig gave no picture at a moment of which a frame was wanted.',
+    consequence: 'The step log has a note in the place of the frame. The run goes on.',
+    answer: 'Look at the camera, at the network to it, and at the reason on the page of the rig. It is asked again at the next swing.',
+  },
   'late-finish': {
     ...morning,
     ...{ onDelayS: 120, offDelayS: 120 },
@@ -289,11 +297,3 @@ export type AlarmCode = keyof typeof kinds;
 export const alarmKinds: Readonly<Record<AlarmCode, AlarmKind>> = kinds;
 export const alarmCodes = Object.keys(kinds) as AlarmCode[];
 export const isAlarmCode = (code: string): code is AlarmCode => code in kinds;
-
-const nearEnoughMs = 3 * 3_600_000;
-
-/** Whether a kind rings, where that depends on the night: a restart of the controller only while enough of it is left to save. */
-export function ringingOf(code: AlarmCode, night: { leftMs: number | null; someoneNear: boolean }): Ringing {
-  if (code !== 'controller-reset') return alarmKinds[code].rings;
-  return night.leftMs !== null && night.leftMs > nearEnoughMs && night.someoneNear ? 'always' : 'morning';
-}

@@ -118,7 +118,15 @@ function silentSince({ run, deflectionUtcMs, utcMs }: RigNow): number | null {
   return flowed && utcMs - deflectionUtcMs > silentMs ? deflectionUtcMs : null;
 }
 
-const slow: readonly AlarmCode[] = ['excursion', 'channel-level', 'channel-slope', 'channel-silent', 'broker-away', 'late-finish'];
+const slow: readonly AlarmCode[] = [
+  'excursion',
+  'channel-level',
+  'channel-slope',
+  'channel-silent',
+  'broker-away',
+  'camera-away',
+  'late-finish',
+];
 
 /** Kinds that a look can tell to be over; others end by what somebody does. */
 const watched: readonly AlarmCode[] = [

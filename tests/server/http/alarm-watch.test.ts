@@ -3,6 +3,7 @@ import { demoIds, seedDemo } from '@/db/demo/seed';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import type { Services } from '@/server/http/services';
 import { AlarmWatch } from '@/server/http/work/alarm-watch';
+import { insertCamera, removeCamera, tellCameraStatus } from '@/server/store/cameras';
 import { insertBroker, removeBroker, tellBrokerStatus } from '@/server/store/brokers';
 import { addLimit } from '@/server/store/channel-limits';
 import { createSampleStore } from '@/server/store/sample-store';
@@ -123,6 +124,36 @@ test('a broker is told of once it has been away for a minute, by what the server
   await looks(watch);
   expect(await alarmOf('broker-away')).toMatchObject({ state: 'returned-unacknowledged' });
   await removeBroker(db, { ...place, id: broker.id, at: clock.utcMs(), by: 'Ott' });
+});
+
+test('a camera that gave no picture is told of after a minute, until it gives one, or nobody has asked it for an hour', async () => {
+  const watch = watchOf();
+  const { db } = database().connection;
+  const of = { labId: demoIds.lab, rigId: demoIds.rig };
+  const secrets = { userName: null, password: null, tokenHash: null };
+  const facts = { name: 'Above the case', kind: 'address', address: 'http://camera.lan/still.jpg' } as const;
+  const camera = await insertCamera(db, { ...of, ...facts, ...secrets, madeAt: clock.utcMs(), madeBy: 'Ott' });
+  const says = (reason: string | null) => tellCameraStatus(db, camera, { askedAt: new Date(clock.utcMs()).toISOString(), reason });
+  await says('it answered with a page of text, not a picture');
+  await looks(watch);
+  await clock.advance(61_000);
+  await looks(watch);
+  expect(await alarmOf('camera-away')).toMatchObject({
+    ...{ state: 'active-unacknowledged', rings: 'morning', rigId: demoIds.rig },
+    words: '"Above the case" gave no picture: it answered with a page of text, not a picture.',
+  });
+  await says(null);
+  await looks(watch);
+  await clock.advance(61_000);
+  await looks(watch);
+  expect(await alarmOf('camera-away')).toMatchObject({ state: 'returned-unacknowledged' });
+  await says('no answer in 8 s');
+  await clock.advance(3_601_000);
+  await looks(watch);
+  await clock.advance(61_000);
+  await looks(watch);
+  expect(await alarmOf('camera-away')).toMatchObject({ state: 'returned-unacknowledged' });
+  await removeCamera(db, { ...of, id: camera.id, at: clock.utcMs(), by: 'Ott' });
 });
 
 test('a channel that had samples and has none for longer than its limit is told, until one comes; another watch knows of it', async () => {

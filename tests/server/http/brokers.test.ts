@@ -130,9 +130,10 @@ test('a broker that vanishes is told and comes back by itself; a removed one is 
   await broker.stop();
   const away = await seen(id, ({ status }) => status?.state === 'away' && status.reason === 'nothing listens at this address');
   expect(away.status?.topics[0]?.taken).toBe(0);
-  expect(await alarmIs('active-unacknowledged')).toBe(
-    `${broker.address} does not answer since ${away.status?.since.slice(11, 19) ?? ''} UTC: nothing listens at this address. Nothing comes into lasting.`,
-  );
+  // In the words of when it was first found away: the line that was closed, or, where that was slow, the address at which nothing listens.
+  const told = await alarmIs('active-unacknowledged');
+  expect(told).toContain(`${broker.address} does not answer since ${away.status?.since.slice(11, 19) ?? ''} UTC: `);
+  expect(told).toMatch(/: (the broker closed the connection|nothing listens at this address)\. Nothing comes into lasting\.$/);
   broker = await broker.again();
   await seen(id, ({ status }) => status?.state === 'connected');
   await broker.say('lasting', message(7, ago(0)), { qos: 1 });

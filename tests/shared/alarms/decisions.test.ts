@@ -1,4 +1,5 @@
-import { alarmCodes, alarmKinds, ringingOf, type AlarmCode } from '@/shared/alarms/catalog';
+import { alarmCodes, alarmKinds, type AlarmCode } from '@/shared/alarms/catalog';
+import { ringingOf } from '@/shared/alarms/ringing';
 import { alarmOfHold } from '@/shared/alarms/of-holds';
 import { consequencesOf, firstCauseOf, type GroupMember } from '@/shared/alarms/grouping';
 import { channelLimitSchema, passesLimit, type ChannelNow } from '@/shared/alarms/limits';
