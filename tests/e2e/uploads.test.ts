@@ -95,7 +95,8 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     cutsAt = Infinity;
     network.become('open');
     await hand.at('import-preview').waitFor();
-    expect(offsets[0]).toBe(before?.bytes);
+    // Nothing that had come is sent again; parts that were under way when the line was cut may have come after all.
+    expect(Math.min(...offsets)).toBeGreaterThanOrEqual(before?.bytes ?? Infinity);
     expect((await listed(night))?.state).toBe('received');
   });
 

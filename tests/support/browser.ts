@@ -78,9 +78,14 @@ async function launch(baseURL: string, size: Size, { installs = false, film }: B
 /** A page of a browser that nobody uses, without anything its last user left but the program of this address; or of a new one. */
 async function blankPage(baseURL: string, key: string, fresh: () => Promise<BrowserContext>) {
   const kept = idle.findIndex((one) => one.key === key);
-  const context = (kept < 0 ? null : idle.splice(kept, 1)[0]?.context) ?? (await fresh());
-  const page = await context.newPage();
-  if (kept < 0) return { context, page };
+  const known = kept < 0 ? null : (idle.splice(kept, 1)[0]?.context ?? null);
+  // One that has died since it was used last is no finding of the test that asks for it next.
+  const again = known === null ? null : await known.newPage().catch(() => null);
+  if (known === null || again === null) {
+    const context = await fresh();
+    return { context, page: await context.newPage() };
+  }
+  const [context, page] = [known, again];
   await context.clearCookies();
   const session = await context.newCDPSession(page);
   await session.send('Storage.clearDataForOrigin', {
