@@ -30,7 +30,8 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     hand = new Hand(await lab().open(size, 'operator'));
   }, 60_000);
   afterAll(async () => {
-    expect(hand.browser.errors).toEqual([]);
+    // What the page asks for while the server or the database is away is answered so, and a browser notes that as an error of its own.
+    expect(hand.browser.errors.filter((words) => !/status of 503/.test(words))).toEqual([]);
     await lab().close(hand.browser);
   });
 
