@@ -14,7 +14,7 @@ interface FinishEarlyProps {
 
 const goesRound = ({ kind }: Step): boolean => kind === 'repeat';
 
-/** To end a run on a whole pair, before the end of its protocol; what is asked for already, by somebody or by the night window; and how to take it back. */
+/** To end a run on a whole pair, before the end of its protocol; what is asked for already, by somebody, by the night window or for few good dwells; and how to take it back. */
 export function FinishEarly({ view, timeZone }: FinishEarlyProps) {
   const { labId } = useLab();
   const may = useMay('run.hold');
@@ -85,6 +85,8 @@ export function askedWords(
 ): string {
   const clock = (iso: string) => formatClock(Date.parse(iso), { timeZone });
   const end = predictedEndAt === null ? '' : ` It is over at about ${clock(predictedEndAt)}.`;
+  if (overBy === null && by === '')
+    return `Few of the dwells are good, so the run ends with the pair under way.${end} Is what was wrong over? Then let it go on.`;
   if (overBy === null) return `The run ends with the pair under way, as ${by} asked: no other pair begins.${end}`;
   return `The run ends on a whole pair before the night window does, at ${clock(overBy)}.${end}`;
 }

@@ -1,6 +1,7 @@
 import { reversalSoFar } from '@/shared/conditions/relative-u';
 import type { CursorMoment } from '@/shared/protocol/cursor';
 import type { Draft } from './draft';
+import type { RunContext } from './run-context';
 
 /** What the dwells of a run say while it goes on: whether they are good, and how well near minus far is known. */
 
@@ -24,6 +25,12 @@ export function noteDwellLook(draft: Draft): void {
   if (finding?.kind !== 'dwell' || context.ahead !== null || finding.facts.seq !== context.step?.row.seq) return;
   context.dwells = [...context.dwells.filter(({ seq }) => seq !== finding.facts.seq), finding.facts].slice(-MOST_DWELLS);
 }
+
+/** So many good dwells, one after the other, show that what was wrong before is over (an estimate, no source). */
+const GOOD_AGAIN = 4;
+
+export const lastAreGood = (dwells: RunContext['dwells']): boolean =>
+  dwells.length >= GOOD_AGAIN && dwells.slice(-GOOD_AGAIN).every(({ good }) => good);
 
 /** So many dwells without deflection, one after the other, and the run holds: what follows would be lost as well. */
 const MOST_SILENT = 2;

@@ -1,13 +1,16 @@
 import type { Draft } from './draft';
 import { predictEndUtcMs } from './predicted-end';
-import type { RunContext } from './run-context';
+import type { Finishing, RunContext } from './run-context';
 
 /** A run that ends before the end of its protocol: the pass under way is made whole, no other begins, and what follows the repeats is carried out. */
 
 const iso = (utcMs: number) => new Date(utcMs).toISOString();
 
 /** Who asked, as the log and the screens say it. */
-export const askedBy = (by: string): string => (by === '' ? 'the night window' : by);
+export const askedBy = ({ by, finishByUtcMs }: Pick<Finishing, 'by' | 'finishByUtcMs'>): string => {
+  if (by !== '') return by;
+  return finishByUtcMs === null ? 'few good dwells' : 'the night window';
+};
 
 /** In force now. */
 export const isFinishing = ({ finishing }: Pick<RunContext, 'finishing'>): boolean =>
@@ -27,8 +30,10 @@ export function finishRefusal(draft: Draft): string | null {
   const { by, finishByUtcMs } = draft.told('finish-early');
   const { finishing } = context;
   if (finishing !== undefined && finishing.withdrawnBy === null && finishing.finishByUtcMs === finishByUtcMs)
-    return `The run is to end early already: ${askedBy(finishing.by)} asked for it.`;
-  if (by === '' && finishing !== undefined) return 'Somebody has decided about the end of this run already.';
+    return `The run is to end early already: ${askedBy(finishing)} asked for it.`;
+  // What is in force for the night window gives way to the few good dwells, which end the run sooner.
+  const sooner = finishing?.by === '' && finishing.withdrawnBy === null && finishByUtcMs === null;
+  if (by === '' && finishing !== undefined && !sooner) return 'Somebody has decided about the end of this run already.';
   const endUtcMs = (cursor: RunContext['cursor']) => predictEndUtcMs(start, { ...context, cursor }, { nowUtcMs });
   const whole = { ...context.cursor };
   delete whole.finishByUtcMs;
@@ -42,17 +47,17 @@ export function finishEarly(draft: Draft): void {
   const { context, nowUtcMs } = draft;
   context.finishing = { by, askedUtcMs: nowUtcMs, finishByUtcMs, withdrawnBy: null };
   heedFinishing(context);
-  draft.log('finish-asked', { by: askedBy(by), ...(finishByUtcMs === null ? {} : { overBy: iso(finishByUtcMs) }) });
+  draft.log('finish-asked', { by: askedBy({ by, finishByUtcMs }), ...(finishByUtcMs === null ? {} : { overBy: iso(finishByUtcMs) }) });
 }
 
 export const refuseFinish = (draft: Draft): void =>
-  draft.log('finish-early-refused', { by: askedBy(draft.told('finish-early').by), why: finishRefusal(draft) });
+  draft.log('finish-early-refused', { by: askedBy(draft.told('finish-early')), why: finishRefusal(draft) });
 
 export function withdrawFinish(draft: Draft): void {
   const { by } = draft.told('withdraw-finish');
   const { context } = draft;
   if (context.finishing === undefined) return;
-  draft.log('finish-withdrawn', { by, askedBy: askedBy(context.finishing.by) });
+  draft.log('finish-withdrawn', { by, askedBy: askedBy(context.finishing) });
   context.finishing = { ...context.finishing, withdrawnBy: by };
   heedFinishing(context);
 }
@@ -67,6 +72,7 @@ export const refuseWithdrawFinish = (draft: Draft): void =>
 export function finishedWords({ finishing }: Pick<RunContext, 'finishing'>, endUtcMs: number): string {
   if (finishing === undefined || finishing.withdrawnBy !== null) return '';
   const late = finishing.finishByUtcMs !== null && endUtcMs > finishing.finishByUtcMs;
+  if (finishing.by === '' && finishing.finishByUtcMs === null) return ', on a whole pair, for few of its dwells were good';
   if (finishing.by === '')
     return late ? ', on a whole pair, after the end of the night window' : ', on a whole pair before the end of the night window';
   return `, on a whole pair as ${finishing.by} asked`;

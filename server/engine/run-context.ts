@@ -102,14 +102,14 @@ export interface Interruption {
   sinceUtcMs: number;
 }
 
-/** The run ends early, on a whole pair: because somebody asked for it, or the night window ends. */
+/** The run ends early, on a whole pair: because somebody asked for it, the night window ends, or few dwells are good. */
 export interface Finishing {
-  /** Who asked; empty: the night window of the room. */
+  /** Who asked; empty: the night window of the room where there is a `finishByUtcMs`, else the few good dwells. */
   by: string;
   askedUtcMs: number;
   /** The run is to be over by then; null: with the pair under way. */
   finishByUtcMs: number | null;
-  /** Who took it back: the run goes on to the end of its protocol, and the window does not ask again; null: nobody. */
+  /** Who took it back: the run goes on to the end of its protocol, and nothing asks again by itself; null: nobody. */
   withdrawnBy: string | null;
 }
 
@@ -238,7 +238,7 @@ export type RunEvent =
   | Told<'stop', { by: string; acted: string | null }>
   | Told<'hold-after-dwell', { by: string }>
   | Told<'withdraw-hold', { by: string }>
-  /** To end on a whole pair; `by` empty: for the night window, which ends at `finishByUtcMs`. */
+  /** To end on a whole pair; `by` empty: for the night window, which ends at `finishByUtcMs`, or for the few good dwells. */
   | Told<'finish-early', { by: string; finishByUtcMs: number | null }>
   | Told<'withdraw-finish', { by: string }>
   | Told<'resume', { by: string; arm: Arm | null }>

@@ -6,6 +6,7 @@ import { planTimeline } from '@/shared/protocol/timeline';
 import type { RunSummaryColumns } from '../interfaces/run-store';
 import { confirmRefusal } from './awaiting';
 import { Draft, nothingOut } from './draft';
+import { lastAreGood } from './dwells';
 import { resumeRefusal } from './halting';
 import { predictEndUtcMs } from './predicted-end';
 import type { Arm, ChartState, Finishing, InterventionKind, KnownPosition, RunSnapshot, Waiting } from './run-context';
@@ -33,6 +34,8 @@ export interface RunFacts {
   /** That it ends, or was to end, before the end of its protocol; null: nobody asked. */
   finishing: Finishing | null;
   dwellsGood: number;
+  /** The last four that were judged are good; false where fewer were. */
+  lastDwellsAreGood: boolean;
   /** Dwells that are done and not good for no other reason than that somebody skipped the other of their pair. */
   dwellsUnpaired: number;
   waiting: WaitingFacts | null;
@@ -155,6 +158,7 @@ export function factsOf({ start, snapshot, nowUtcMs, arm, lockedBy, lastSeq, pre
     holdAfterDwell: context.holdAfterStep !== null,
     finishing: context.finishing ?? null,
     dwellsGood: context.dwellsGood,
+    lastDwellsAreGood: lastAreGood(context.dwells),
     dwellsUnpaired: context.dwellsUnpaired ?? 0,
     waiting: waitingFacts(start, snapshot, { utcMs: nowUtcMs, arm, lockedBy }),
     reversal: reversalSoFar(context.dwells),

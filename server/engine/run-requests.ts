@@ -35,7 +35,7 @@ export class RunRequests {
     return this.ask({ type: 'withdraw-hold', at: this.run.now(), by }, 'hold-after-dwell-withdrawn');
   }
 
-  /** The run ends on a whole pair: with the one under way, or the last one after which it is over by `finishByUtcMs`. `by` empty: the night window asks. */
+  /** The run ends on a whole pair: with the one under way, or the last one after which it is over by `finishByUtcMs`. `by` empty: the night window asks, or the few good dwells. */
   finishEarly(by: string, finishByUtcMs: number | null = null): Promise<Answer> {
     return this.ask({ type: 'finish-early', at: this.run.now(), by, finishByUtcMs }, 'finish-asked');
   }

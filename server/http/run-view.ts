@@ -156,6 +156,7 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
     holdAfterDwell: false,
     finishing: null,
     dwellsGood: steps.filter((step) => step.kind === 'dwell' && step.outcome === 'done' && step.good !== false).length,
+    lastDwellsAreGood: false,
     dwellsUnpaired: 0,
     waiting: null,
     reversal: null,

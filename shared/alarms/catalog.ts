@@ -185,9 +185,8 @@ const kinds = {
     ...morning,
     title: 'Few good dwells',
     cause: 'The run has passed half of its dwells, and fewer than half of those that are done are good.',
-    consequence: 'The night says less than was planned. The run goes on, and makes up what its protocol allows.',
-    answer:
-      'Read in the step log why they are not good. Where the night is not worth going on, end it on a whole pair on the page of the run.',
+    consequence: 'The night says less than was planned. The run ends with the pair under way, unless its last four dwells are good.',
+    answer: 'Read in the step log why they are not good. Where what was wrong is over, let the run go on, on its page.',
     followsFrom: ['deflection-silent', 'residual-high', 'channel-silent', 'channel-level', 'channel-slope'],
   },
   'channel-level': {

@@ -14,7 +14,7 @@ export const interventionSchema = z.strictObject({
 
 /** That a run ends before the end of its protocol, on a whole pair. */
 export const finishingSchema = z.strictObject({
-  /** Who asked; empty: the night window of the room. */
+  /** Who asked; empty: the night window of the room where there is an `overBy`, else the few good dwells. */
   by: z.string(),
   at: instantSchema,
   /** The run is to be over by then; null: with the pair under way. */

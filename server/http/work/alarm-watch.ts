@@ -12,7 +12,7 @@ import { channelsOfRun } from '../../store/runs-read';
 import { lastSampleUtcMs } from '../../store/sample-summaries';
 import type { Services } from '../services';
 import { excursionCondition } from './channel-conditions';
-import { heedNightWindow } from './late-finish';
+import { heedEarlyEnd } from './early-end';
 import { OutageCall } from './outage-call';
 import { conditionsOf, isSlow, isWatched, runNowOf, type Condition } from './rig-conditions';
 import { standingConditions } from './standing-conditions';
@@ -177,7 +177,7 @@ export class AlarmWatch {
       const facts = driver.facts();
       const active = services.activeRuns.find(rig.labId, facts.runId);
       const { timeZone = 'UTC' } = active?.run.start ?? {};
-      slow.push(...(await heedNightWindow(db, driver, { labId: rig.labId, rigId: rig.id, timeZone })));
+      slow.push(...(await heedEarlyEnd(db, driver, { labId: rig.labId, rigId: rig.id, timeZone })));
       const station = services.stations.get(rig.id);
       const channel = station === null ? null : await this.deflectionOf(rig.labId, facts.runId, station);
       if (channel !== null) slow.push(...(await excursionCondition(services.database, rig, { channel, utcMs, runId: facts.runId })));

@@ -3,6 +3,7 @@ import { alarmOfHold } from '@/shared/alarms/of-holds';
 import type { RunState } from '@/shared/contracts/runs';
 import type { RunFacts } from '../../engine/run-facts';
 import type { LinkHealth } from '../../interfaces/turntable-link';
+import { dwellsSoFar, fewGoodWords, type DwellsSoFar } from './few-good';
 
 /** A condition that holds now. */
 export interface Condition {
@@ -24,8 +25,7 @@ interface RunNow {
   startedUtcMs: number | null;
   /** The last dwell was noisier than an ordinary night's; null where it was not. */
   loud: { words: string; sinceUtcMs: number } | null;
-  /** Those whose other one of the pair somebody skipped are not counted as done: nobody need be told of what was done on purpose. */
-  dwells: { done: number; good: number; planned: number };
+  dwells: DwellsSoFar;
   /** Of the pendulum, s; null where it is not measured. */
   periodS: number | null;
 }
@@ -35,7 +35,7 @@ export const runNowOf = (
   periodS: number | null,
 ): RunNow => ({
   ...{ id: runId, state, reason, reasonCode, startedUtcMs: startedAtUtcMs, loud, periodS },
-  dwells: { done: facts.dwellsDone - facts.dwellsUnpaired, good: facts.dwellsGood, planned: facts.dwellsPlanned },
+  dwells: dwellsSoFar(facts),
 });
 
 /** What is seen of a rig at one moment. */
@@ -55,8 +55,6 @@ export interface RigNow {
 
 const silentMs = 60_000;
 const firstAnswerS = 60;
-/** With fewer dwells than these it is too early to say that few are good. */
-const leastDwells = 4;
 const atRest: RunState[] = ['holding', 'held'];
 const atWork: RunState[] = ['starting', 'running', ...atRest];
 
@@ -90,7 +88,7 @@ export function conditionsOf(now: RigNow): Condition[] {
       ...run.loud,
       ...(run.periodS === null ? {} : { onDelayS: Math.round(run.periodS) }),
     });
-  const few = run === null ? null : fewGood(run.dwells);
+  const few = run === null ? null : fewGoodWords(run.dwells);
   if (few !== null) add('few-good', few);
   const silent = silentSince(now);
   if (silent !== null)
@@ -103,12 +101,6 @@ export function conditionsOf(now: RigNow): Condition[] {
       onDelayS: silentMs / 1000,
     });
   return found;
-}
-
-/** From half time on, fewer than half of the dwells are good: in words; else null. */
-function fewGood({ done, good, planned }: RunNow['dwells']): string | null {
-  if (done < leastDwells || 2 * done < planned || 2 * good >= done) return null;
-  return `${String(good)} of ${String(done)} dwells are good so far; ${String(planned)} are planned.`;
 }
 
 /** Since when the deflection of a run is silent; null where it is not, or where none was flowing when the run began. */

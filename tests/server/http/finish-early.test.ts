@@ -92,3 +92,84 @@ test('a hold that moves a run beyond its night window costs the last pairs: it i
   expect(dwells.length).toBeLessThan(20);
   await lab.as('keeper', 'PUT', `${base}/rigs/${demoIds.rig}/hours`).send({ nightWindow: null, blackouts: [] }).expect(200);
 });
+
+describe('few good dwells by half time', () => {
+  let secret = '';
+  beforeAll(async () => {
+    const channels = [{ name: 'air', role: 'environment', unit: 'degC', rateHz: 0.1 }];
+    const made = await lab.as('owner', 'POST', `${base}/rigs/${demoIds.rig}/devices`).send({ name: 'thermometer', channels }).expect(201);
+    secret = String((made.body as { secret: string }).secret);
+  });
+  const tells = (value: number) =>
+    lab
+      .as('viewer', 'POST', '/samples')
+      .set('authorization', `Bearer ${secret}`)
+      .set('content-type', 'application/x-ndjson')
+      .send(JSON.stringify({ time_utc: lab.nowIso(), value }))
+      .expect(200);
+  /** The air of the room is at `airOf(pairs done)` °C; a dwell is good below 22 °C. */
+  async function passes(runId: string, airOf: (pairsDone: number) => number, until: () => boolean): Promise<void> {
+    for (let strides = 0; strides < 150 && !until(); strides += 1) {
+      await tells(airOf(Math.floor((factsOf(runId)?.dwellsDone ?? 0) / 2)));
+      await lab.advance(10_000);
+    }
+  }
+  const started = async (times = 6) => {
+    await tells(21);
+    return lab.run({ ...pairs(times), goodWhen: { channels: [{ channel: 'air', below: 22 }] } });
+  };
+  const few = async () => {
+    const { items } = (await lab.as('viewer', 'GET', `${base}/alarms`).expect(200)).body as { items: { code: string; words: string }[] };
+    return items.find(({ code }) => code === 'few-good')?.words;
+  };
+
+  test('end the run with the pair under way, which is told and may be taken back once and for all', async () => {
+    const runId = await started();
+    await passes(
+      runId,
+      () => 24,
+      () => factsOf(runId)?.finishing != null,
+    );
+    expect(factsOf(runId)?.dwellsDone).toBeGreaterThanOrEqual(6);
+    expect((await lab.view(runId)).finishing).toMatchObject({ by: '', overBy: null, withdrawnBy: null });
+    await lab.as('operator', 'POST', `${base}/runs/${runId}/withdraw-finish`).send({ tappedAt: lab.nowIso() }).expect(202);
+    await passes(
+      runId,
+      () => 24,
+      () => (factsOf(runId)?.dwellsDone ?? 0) >= 9,
+    );
+    expect(factsOf(runId)?.finishing).toMatchObject({ by: '', withdrawnBy: 'Ilse Marrowby' });
+    expect(await few()).toMatch(/^0 of \d dwells are good so far; 12 are planned\. The run goes on, as Ilse Marrowby decided\.$/);
+    await lab.intervene(runId, 'stop').expect(202);
+    await lab.until(runId, 'stopped');
+  });
+
+  test('so the run is over on a whole pair, and its log says why', async () => {
+    const runId = await started();
+    await passes(
+      runId,
+      () => 24,
+      () => factsOf(runId)?.finishing != null,
+    );
+    const view = await lab.until(runId, 'finished');
+    expect([6, 8]).toContain(view.dwellsDone);
+    const { items } = (await lab.as('viewer', 'GET', `${base}/runs/${runId}/events?limit=500`).expect(200)).body as {
+      items: { kind: string; data: Record<string, unknown> }[];
+    };
+    expect(items.filter(({ kind }) => kind === 'finish-asked').map(({ data }) => data)).toEqual([{ by: 'few good dwells' }]);
+    expect(items.find(({ kind }) => kind === 'finished')?.data).toMatchObject({
+      early: 'on a whole pair, for few of its dwells were good',
+    });
+  });
+
+  test('do not, where the last four show that what was wrong is over: the whole night is measured', async () => {
+    const runId = await started(10);
+    await passes(
+      runId,
+      (done) => (done < 3 ? 24 : 21),
+      () => factsOf(runId)?.state === 'finished' || (factsOf(runId)?.dwellsDone ?? 0) > 19,
+    );
+    const view = await lab.until(runId, 'finished');
+    expect(view).toMatchObject({ dwellsDone: 20, finishing: null });
+  });
+});

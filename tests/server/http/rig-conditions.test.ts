@@ -2,7 +2,7 @@ import { readFileSync } from 'node:fs';
 import { join } from 'node:path';
 import type { RunFacts } from '@/server/engine/run-facts';
 import { excursionWords } from '@/server/http/work/channel-conditions';
-import { finishByOf, lateWords } from '@/server/http/work/late-finish';
+import { finishByOf, lateWords } from '@/server/http/work/early-end';
 import { conditionsOf, runNowOf, type RigNow } from '@/server/http/work/rig-conditions';
 import { alarmCodes, alarmKinds, type AlarmCode, type Ringing } from '@/shared/alarms/catalog';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
@@ -26,7 +26,7 @@ const running: NonNullable<RigNow['run']> = {
   reasonCode: '',
   startedUtcMs: utcMs - 3_600_000,
   loud: null,
-  dwells: { done: 0, good: 0, planned: 32 },
+  dwells: { done: 0, good: 0, planned: 32, lastAreGood: false, finishing: null },
   periodS: 420,
 };
 const codesOf = (now: Partial<RigNow>) => conditionsOf({ ...quiet, ...now }).map(({ code }) => code);
@@ -106,12 +106,31 @@ test.each([
   ['half of them good', { done: 16, good: 8, planned: 32 }, null],
   ['too few to say', { done: 3, good: 0, planned: 4 }, null],
 ])('few good dwells: %s', (_, dwells, words) => {
-  const found = conditionsOf({ ...quiet, run: { ...running, dwells } });
+  const found = conditionsOf({ ...quiet, run: { ...running, dwells: { ...running.dwells, ...dwells } } });
   expect(found).toEqual(words === null ? [] : [expect.objectContaining({ code: 'few-good', words, runId: 'run' })]);
 });
 
+const ends = { by: '', askedUtcMs: utcMs, finishByUtcMs: null, withdrawnBy: null };
+test.each([
+  ['ends', { finishing: ends }, / The run ends on a whole pair\.$/],
+  ['goes on as somebody decided', { finishing: { ...ends, withdrawnBy: 'Ben' } }, / The run goes on, as Ben decided\.$/],
+  ['goes on because it has become good', { lastAreGood: true }, / The last ones are good, so the run goes on\.$/],
+])('few good dwells, and the run %s', (_, more, words) => {
+  const [found] = conditionsOf({ ...quiet, run: { ...running, dwells: { ...running.dwells, done: 16, good: 7, ...more } } });
+  expect(found?.words).toMatch(words);
+});
+
 test('a dwell whose other of the pair was skipped by somebody is not held against the night', () => {
-  const facts = { dwellsDone: 5, dwellsGood: 2, dwellsUnpaired: 0, dwellsPlanned: 8, state: 'running', loud: null } as unknown as RunFacts;
+  const facts = {
+    dwellsDone: 5,
+    dwellsGood: 2,
+    dwellsUnpaired: 0,
+    dwellsPlanned: 8,
+    lastDwellsAreGood: false,
+    finishing: null,
+    state: 'running',
+    loud: null,
+  } as unknown as RunFacts;
   const codes = (change: Partial<RunFacts>) =>
     conditionsOf({ ...quiet, run: runNowOf({ ...facts, ...change }, 420) }).map(({ code }) => code);
   expect(codes({})).toEqual(['few-good']);

@@ -5,15 +5,17 @@ import type { RunDriver } from '../../engine/run-driver';
 import type { RunFacts } from '../../engine/run-facts';
 import type { Database } from '../../store/database';
 import { hoursOfRoom } from '../../store/schedules';
+import { heedFewGood } from './few-good';
 import type { Condition } from './rig-conditions';
 
-/** A run that holds or bad dwells have moved beyond the night window of its room: told, and ended on a whole pair before the window is over. */
+/** What ends a run on a whole pair by itself: few good dwells, and the end of the night window of its room where holds or bad dwells have moved it beyond. */
 
-export async function heedNightWindow(
+export async function heedEarlyEnd(
   db: Database,
   driver: RunDriver,
   { timeZone, ...rig }: { labId: string; rigId: string; timeZone: string },
 ): Promise<Condition[]> {
+  await heedFewGood(driver);
   const room = { hours: await hoursOfRoom(db, rig), timeZone };
   const finishByUtcMs = finishByOf(driver.facts(), room);
   if (finishByUtcMs !== null) await driver.requests.finishEarly('', finishByUtcMs);
