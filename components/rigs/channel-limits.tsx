@@ -73,6 +73,7 @@ function LimitRow({ rigId, item, mayEdit }: { rigId: string; item: ChannelLimitV
 const kindOptions = [
   { value: 'level', label: 'Level' },
   { value: 'slope', label: 'Slope' },
+  { value: 'span', label: 'Span' },
   { value: 'silence', label: 'Silence' },
 ] as const;
 
@@ -83,7 +84,10 @@ const ringsOptions: readonly { value: ChannelLimit['rings']; label: string }[] =
 ];
 
 /** Fields as they are typed, and where a refusal names them. */
-const fieldPaths = { least: 'least', greatest: 'greatest', perH: 'greatestPerH', atMostS: 'atMostS', forS: 'forS' } as const;
+const fieldPaths = {
+  ...{ least: 'least', greatest: 'greatest', perH: 'greatestPerH', span: 'atMost', windowMin: 'windowS' },
+  ...{ atMostS: 'atMostS', forS: 'forS' },
+} as const;
 
 function LimitSheet({ rigId, onClose }: { rigId: string; onClose: () => void }) {
   const channels = useLabQuery(listChannels, { params: { rigId } }).data?.data.items ?? [];
@@ -93,6 +97,8 @@ function LimitSheet({ rigId, onClose }: { rigId: string; onClose: () => void }) 
     least: '',
     greatest: '',
     perH: '',
+    span: '',
+    windowMin: '10',
     atMostS: '60',
     forS: '60',
     rings: 'morning',
@@ -152,7 +158,9 @@ function LimitSheet({ rigId, onClose }: { rigId: string; onClose: () => void }) 
           {field('greatest', 'Not above (empty: no limit)', unit)}
         </>
       ) : null}
-      {draft.kind === 'slope' ? field('perH', 'Change at most, to either side, over ten minutes', `${unit} an hour`) : null}
+      {draft.kind === 'slope' ? field('perH', 'Change at most, to either side', `${unit} an hour`) : null}
+      {draft.kind === 'span' ? field('span', 'Greatest minus least at most', unit) : null}
+      {draft.kind === 'slope' || draft.kind === 'span' ? field('windowMin', 'Looked at over the last', 'min') : null}
       {draft.kind === 'silence'
         ? field('atMostS', 'Longest time without a sample', 's')
         : field('forS', 'Only when it lasts longer than', 's')}

@@ -7,6 +7,9 @@ export interface LimitDraft {
   least: string;
   greatest: string;
   perH: string;
+  span: string;
+  /** Over how long slope and span are looked at, min. */
+  windowMin: string;
   atMostS: string;
   forS: string;
   rings: ChannelLimit['rings'];
@@ -22,9 +25,11 @@ export function limitOf(draft: LimitDraft, read: (text: string) => number | null
   }
   const forS = read(draft.forS);
   if (forS === null) return null;
-  if (kind === 'slope') {
-    const greatestPerH = read(draft.perH);
-    return greatestPerH === null ? null : { kind, greatestPerH, windowS: 600, deadBand: 0.02, forS, rings };
+  if (kind === 'slope' || kind === 'span') {
+    const [greatest, windowMin] = [read(kind === 'slope' ? draft.perH : draft.span), read(draft.windowMin)];
+    if (greatest === null || windowMin === null) return null;
+    const more = { windowS: 60 * windowMin, deadBand: 0.02, forS, rings };
+    return kind === 'slope' ? { kind, greatestPerH: greatest, ...more } : { kind, atMost: greatest, ...more };
   }
   const [least, greatest] = [numberOr(draft.least), numberOr(draft.greatest)];
   if (!least.ok || !greatest.ok || (least.value === null && greatest.value === null)) return null;
@@ -38,7 +43,9 @@ export function limitWords(limit: ChannelLimit, unit: string): string {
       if (limit.greatest === null) return `not below ${String(limit.least)} ${unit}`;
       return `${String(limit.least)} to ${String(limit.greatest)} ${unit}`;
     case 'slope':
-      return `at most ${String(limit.greatestPerH)} ${unit} an hour`;
+      return `at most ${String(limit.greatestPerH)} ${unit} an hour, over ${formatDuration(limit.windowS)}`;
+    case 'span':
+      return `spans at most ${String(limit.atMost)} ${unit} in ${formatDuration(limit.windowS)}`;
     case 'silence':
       return `silent for at most ${formatDuration(limit.atMostS)}`;
   }

@@ -52,6 +52,16 @@ export async function slopePerHOf(
   return slope === null ? null : slope * scale;
 }
 
+/** Greatest minus least sample of the last `windowMs`, in the channel's unit; null where it holds none. */
+export async function spanOf(
+  connection: Connection,
+  channel: ChannelKey,
+  { utcMs, windowMs }: { utcMs: number; windowMs: number },
+): Promise<number | null> {
+  const [sums] = await sumsOf(connection, channel, [{ fromUtcMs: utcMs - windowMs, toUtcMs: utcMs + aheadMs }]);
+  return sums?.least == null || sums.greatest === null ? null : sums.greatest - sums.least;
+}
+
 /** Mean of the last `windowMs`, least and greatest of their last `recentMs`; null where either holds nothing. */
 export async function extremesAbout(
   connection: Connection,

@@ -198,8 +198,8 @@ const kinds = {
   },
   'channel-slope': {
     ...morning,
-    title: 'Channel changes too fast',
-    cause: 'A channel rose or fell faster than the lab allows.',
+    title: 'Channel changes too much',
+    cause: 'A channel rose or fell faster, or spanned more, than the lab allows.',
     consequence: 'The rest line drifts with it; dwells of this time may not be good.',
     answer: 'Heating, sun or an open door: find what changed, and note it.',
   },

@@ -1,6 +1,6 @@
 import * as z from 'zod';
 
-/** Limits of a channel: its level, its slope, its silence. */
+/** Limits of a channel: its level, its slope, its span, its silence. */
 
 const shared = {
   /** The limit must be passed this long before the alarm is raised, s; for deflection at least one period. */
@@ -8,6 +8,8 @@ const shared = {
   /** Whom it tells. */
   rings: z.enum(['allowed', 'morning', 'never']).default('morning'),
 };
+
+const windowS = z.number().min(10).max(86_400);
 
 export const channelLimitSchema = z.discriminatedUnion('kind', [
   z
@@ -29,7 +31,15 @@ export const channelLimitSchema = z.discriminatedUnion('kind', [
     kind: z.literal('slope'),
     /** Greatest change to either side, in the channel's unit per hour, fitted over the last `windowS`. */
     greatestPerH: z.number().positive(),
-    windowS: z.number().min(10).max(86_400).default(600),
+    windowS: windowS.default(600),
+    deadBand: z.number().min(0).max(0.5).default(0.02),
+    ...shared,
+  }),
+  z.strictObject({
+    kind: z.literal('span'),
+    /** Greatest minus least reading of the last `windowS`, in the channel's unit. */
+    atMost: z.number().positive(),
+    windowS: windowS.default(3600),
     deadBand: z.number().min(0).max(0.5).default(0.02),
     ...shared,
   }),
@@ -48,17 +58,21 @@ export interface ChannelNow {
   last: { utcMs: number; value: number } | null;
   /** Straight line through the last `windowS`, in the channel's unit per hour; null where there are too few samples. */
   slopePerH: number | null;
+  /** Greatest minus least of the last `windowS`, in the channel's unit; null where there is no sample. */
+  span: number | null;
   /** Whether the alarm is on, so that the dead band counts. */
   met: boolean;
 }
 
 /** Whether the limit is passed. What is not known passes no limit but that of silence. */
-export function passesLimit(limit: ChannelLimit, { utcMs, last, slopePerH, met }: ChannelNow): boolean {
+export function passesLimit(limit: ChannelLimit, { utcMs, last, slopePerH, span, met }: ChannelNow): boolean {
   switch (limit.kind) {
     case 'silence':
       return last !== null && utcMs - last.utcMs > 1000 * limit.atMostS;
     case 'slope':
       return slopePerH !== null && Math.abs(slopePerH) > limit.greatestPerH * (met ? 1 - limit.deadBand : 1);
+    case 'span':
+      return span !== null && span > limit.atMost * (met ? 1 - limit.deadBand : 1);
     case 'level':
       return last !== null && isBeyond(limit, last.value, met);
   }

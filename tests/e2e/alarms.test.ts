@@ -143,6 +143,17 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.taps('limit-save');
     await hand.at('limit-sheet').waitFor({ state: 'detached' });
     await hand.reads('channel-limits', /deflection: not above 0.002 rad/);
+    await hand.taps('add-limit');
+    await hand.taps(hand.at('limit-sheet').getByRole('radio', { name: 'Span' }));
+    await hand.types('limit-span', '0,5');
+    await hand.types('limit-windowMin', '0');
+    await hand.taps('limit-save');
+    await hand.reads('limit-sheet', /The limit was not set/);
+    await hand.shoots('limit-span');
+    await hand.types('limit-windowMin', '240');
+    await hand.taps('limit-save');
+    await hand.at('limit-sheet').waitFor({ state: 'detached' });
+    await hand.reads('channel-limits', /deflection: spans at most 0.5 rad in 4 h/);
     await hand.follows(`/rigs/${demoIds.rig}/start?protocol=${protocol.protocolId}&revision=1`, 'start-screen');
     await hand.sees('Ottilie Vanterpool (you), then Casimir Thornquist, then Tam Ferrowdale');
     await hand.shoots('start-on-call');

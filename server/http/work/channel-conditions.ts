@@ -2,9 +2,10 @@ import { passesLimit } from '@/shared/alarms/limits';
 import { NEAR_LIMIT, swingRoomRad } from '@/shared/conditions/dwell-verdict';
 import { UnusableArchive } from '@/shared/archive/unusable-archive';
 import { scaleOf, toRad, type ChannelScale } from '@/shared/evaluation/channel-scale';
+import { formatDuration } from '@/shared/lib/format-duration';
 import type { RigDocument } from '@/shared/rig/document';
 import type { LimitRecord } from '../../store/channel-limits';
-import { extremesAbout, slopePerHOf } from '../../store/channel-now';
+import { extremesAbout, slopePerHOf, spanOf } from '../../store/channel-now';
 import type { Connection } from '../../store/database';
 import type { RigRecord } from '../../store/rigs';
 import { lastSampleOf } from '../../store/sample-summaries';
@@ -13,7 +14,9 @@ import type { Condition } from './rig-conditions';
 /** Conditions that need a look into the database: limits of channels, the pendulum's excursion. */
 
 export const subjectOfLimit = (limitId: string) => `limit ${limitId}`;
-const codes = { level: 'channel-level', slope: 'channel-slope', silence: 'channel-silent' } as const;
+const codes = { level: 'channel-level', slope: 'channel-slope', span: 'channel-slope', silence: 'channel-silent' } as const;
+
+const rounded = (value: number, digits = 3) => String(Number(value.toPrecision(digits)));
 
 export interface LimitView {
   utcMs: number;
@@ -29,15 +32,18 @@ export async function limitConditions(
   for (const { id, limit, channelId, channelName, unit, labId } of limits) {
     const [code, subject] = [codes[limit.kind], subjectOfLimit(id)];
     const key = { labId, channelId };
+    const window = 'windowS' in limit ? { utcMs, windowMs: 1000 * limit.windowS } : null;
     const now = {
       last: await lastSampleOf(connection, key),
-      slopePerH: limit.kind === 'slope' ? await slopePerHOf(connection, key, { utcMs, windowMs: 1000 * limit.windowS }) : null,
+      slopePerH: limit.kind === 'slope' && window !== null ? await slopePerHOf(connection, key, window) : null,
+      span: limit.kind === 'span' && window !== null ? await spanOf(connection, key, window) : null,
     };
     if (!passesLimit(limit, { utcMs, ...now, met: isMet(code, subject) })) continue;
-    const value = now.last === null ? '' : `${String(Number(now.last.value.toPrecision(4)))} ${unit}`;
+    const value = now.last === null ? '' : `${rounded(now.last.value, 4)} ${unit}`;
     const words = {
       level: `${channelName} is at ${value}.`,
-      slope: `${channelName} changes by ${String(Number((now.slopePerH ?? 0).toPrecision(3)))} ${unit} an hour.`,
+      slope: `${channelName} changes by ${rounded(now.slopePerH ?? 0)} ${unit} an hour.`,
+      span: `${channelName} spans ${rounded(now.span ?? 0)} ${unit} in ${formatDuration((window?.windowMs ?? 0) / 1000)}.`,
       silence: `${channelName} has had no sample since ${new Date(now.last?.utcMs ?? 0).toISOString().slice(11, 19)} UTC.`,
     }[limit.kind];
     found.push({ code, subject, words, runId: null, rings: limit.rings, onDelayS: 'forS' in limit ? limit.forS : 0 });

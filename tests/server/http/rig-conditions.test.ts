@@ -26,7 +26,7 @@ const running: NonNullable<RigNow['run']> = {
   reasonCode: '',
   startedUtcMs: utcMs - 3_600_000,
   loud: null,
-  dwells: { done: 0, good: 0, planned: 32, lastAreGood: false, finishing: null },
+  dwells: { done: 0, good: 0, planned: 32 },
   periodS: 420,
 };
 const codesOf = (now: Partial<RigNow>) => conditionsOf({ ...quiet, ...now }).map(({ code }) => code);
@@ -106,18 +106,8 @@ test.each([
   ['half of them good', { done: 16, good: 8, planned: 32 }, null],
   ['too few to say', { done: 3, good: 0, planned: 4 }, null],
 ])('few good dwells: %s', (_, dwells, words) => {
-  const found = conditionsOf({ ...quiet, run: { ...running, dwells: { ...running.dwells, ...dwells } } });
+  const found = conditionsOf({ ...quiet, run: { ...running, dwells } });
   expect(found).toEqual(words === null ? [] : [expect.objectContaining({ code: 'few-good', words, runId: 'run' })]);
-});
-
-const ends = { by: '', askedUtcMs: utcMs, finishByUtcMs: null, withdrawnBy: null };
-test.each([
-  ['ends', { finishing: ends }, / The run ends on a whole pair\.$/],
-  ['goes on as somebody decided', { finishing: { ...ends, withdrawnBy: 'Ben' } }, / The run goes on, as Ben decided\.$/],
-  ['goes on because it has become good', { lastAreGood: true }, / The last ones are good, so the run goes on\.$/],
-])('few good dwells, and the run %s', (_, more, words) => {
-  const [found] = conditionsOf({ ...quiet, run: { ...running, dwells: { ...running.dwells, done: 16, good: 7, ...more } } });
-  expect(found?.words).toMatch(words);
 });
 
 test('a dwell whose other of the pair was skipped by somebody is not held against the night', () => {

@@ -1,5 +1,5 @@
 import * as fc from 'fast-check';
-import { extremesAbout, levelOfSlope, slopePerHOf } from '@/server/store/channel-now';
+import { extremesAbout, levelOfSlope, slopePerHOf, spanOf } from '@/server/store/channel-now';
 import { createSampleStore } from '@/server/store/sample-store';
 import { lastSampleOf } from '@/server/store/sample-summaries';
 import { spacingOf } from '@/server/store/spacing';
@@ -47,6 +47,15 @@ test('the slope over a long window, from summaries, is that of its samples withi
   const slope = await slopePerHOf(connection, channel, { utcMs: eveningUtcMs + 3_000_000, windowMs: 2_400_000 });
   const wanted = slopeOf(samples.filter(({ s }) => s >= 600));
   expect(Math.abs((slope ?? NaN) / wanted - 1)).toBeLessThan(1e-3);
+});
+
+test('the span of a window is that of its samples to the last digit, and of an empty one none', async () => {
+  const samples = pressure(3000);
+  const { connection, channel } = await channelWith(samples);
+  const inside = samples.filter(({ s }) => s >= 600).map(({ value }) => value);
+  const window = { utcMs: eveningUtcMs + 3_000_000, windowMs: 2_400_000 };
+  expect(await spanOf(connection, channel, window)).toBe(Math.max(...inside) - Math.min(...inside));
+  expect(await spanOf(connection, channel, { utcMs: eveningUtcMs - 3_600_000, windowMs: 60_000 })).toBeNull();
 });
 
 test('two samples have no slope, and the greatest numbers none that breaks the look at them', async () => {

@@ -134,7 +134,7 @@ describe('floods', () => {
 
 describe('limits of a channel', () => {
   const now = (value: number | null, change: Partial<ChannelNow> = {}): ChannelNow => ({
-    ...{ utcMs: 1_000_000, last: value === null ? null : { utcMs: 999_000, value }, slopePerH: null, met: false },
+    ...{ utcMs: 1_000_000, last: value === null ? null : { utcMs: 999_000, value }, slopePerH: null, span: null, met: false },
     ...change,
   });
 
@@ -147,6 +147,11 @@ describe('limits of a channel', () => {
 
   test('slope to either side, silence by the age of the last sample', () => {
     const slope = channelLimitSchema.parse({ kind: 'slope', greatestPerH: 0.3 });
+    const span = channelLimitSchema.parse({ kind: 'span', atMost: 0.5 });
+    expect(span).toMatchObject({ windowS: 3600 });
+    expect([0.5, 0.51, null].map((each) => passesLimit(span, now(20, { span: each })))).toEqual([false, true, false]);
+    expect([0.495, 0.485].map((each) => passesLimit(span, now(20, { span: each, met: true })))).toEqual([true, false]);
+    expect(channelLimitSchema.safeParse({ kind: 'span', atMost: -1 }).success).toBe(false);
     expect([0.2, 0.4, -0.4, null].map((slopePerH) => passesLimit(slope, now(20, { slopePerH })))).toEqual([false, true, true, false]);
     const silence = channelLimitSchema.parse({ kind: 'silence', atMostS: 60 });
     expect(passesLimit(silence, now(20))).toBe(false);
