@@ -4,7 +4,6 @@ import { kickMoves } from '@/shared/physics/kick';
 import { oscillatorOf } from '@/shared/physics/oscillator';
 import type { PendulumSetting } from '@/shared/physics/pendulum';
 import { residualAtPeriod, shapedSwing } from '@/shared/physics/shaped-swing';
-import { angleOfRest, motionAfter, movesByCentroid, standingAt, type Slew } from '@/shared/physics/timed-moves';
 import { geometryOf } from '@/shared/physics/torque';
 import { closeRig, closeSourceAngleRad, wideRig, wideSourceAngleRad } from '../../support/reference-rigs';
 
@@ -42,64 +41,6 @@ describe('catching a motion', () => {
     expect(found?.level).toBeCloseTo(0.189640267, 6);
     expect(found?.holdS).toBeCloseTo(363.587712, 3);
     expect(omega0).toBeGreaterThan(omega);
-  });
-});
-
-describe('moves by the classical rule with the period at the near station', () => {
-  const near = { W: { K: standingAt(wide, W.toDeg).halfRatio }, N: { K: standingAt(close, N.toDeg).halfRatio } };
-  /** The fractions of the step reached after each move but the last. */
-  const fractions = { 1: () => [], 2: (K: number) => [1 / (1 + K)], 3: (K: number) => [1 / (1 + K) ** 2, (1 + 2 * K) / (1 + K) ** 2] };
-  const byRule = (at: typeof W, { K, periodS, slew = instant, count }: { K: number; periodS: number; slew?: Slew; count: 1 | 2 | 3 }) => {
-    const from = standingAt(at.setting, at.fromDeg).restRad;
-    const stepRad = standingAt(at.setting, at.toDeg).restRad - from;
-    const between = fractions[count](K).map((fraction) => angleOfRest(at.setting, at, from + fraction * stepRad));
-    const pausesS = between.map(() => periodS / 2);
-    const moves = movesByCentroid(at.setting, slew, { anglesDeg: [at.fromDeg, ...between, at.toDeg], pausesS });
-    const residual = Math.abs(motionAfter(at.setting, slew, moves).amplitudeRad / stepRad);
-    const fallS = Math.max(0, Math.log(residual / 0.01) / at.setting.oscillator.gamma);
-    return { middleDeg: between[0], residual, settledS: pausesS.reduce((sum, pauseS) => sum + pauseS, 0) + fallS };
-  };
-  const rule = (at: typeof W, K: number, periodS: number, slew = instant) => byRule(at, { K, periodS, slew, count: 2 });
-
-  test('reach the published intermediate angles and residuals of instantaneous moves', () => {
-    const [w, n] = [rule(W, near.W.K, 419.99664926), rule(N, near.N.K, 421.84230327)];
-    expect(w.middleDeg).toBeCloseTo(1.097277043687, 5);
-    expect(n.middleDeg).toBeCloseTo(76.53403276506, 5);
-    expect(w.residual).toBeCloseTo(0.00433293, 5);
-    expect(n.residual).toBeCloseTo(0.00537401, 5);
-  });
-
-  // Made for a period that is too long by `e`: G2, and the time until the envelope is within 1 % (G4).
-  test.each([
-    { at: 'W', e: 0, count: 1, left: 1.00196, settledS: 4917.8 },
-    { at: 'W', e: 0.02, count: 2, left: 0.0328732, settledS: 1484.5 },
-    { at: 'W', e: 0.05, count: 2, left: 0.0754125, settledS: 2377.1 },
-    { at: 'W', e: 0.1, count: 2, left: 0.14533, settledS: 3087.9 },
-    { at: 'W', e: 0, count: 3, left: 0.0002754, settledS: 420 },
-    { at: 'W', e: 0.02, count: 3, left: 0.001031, settledS: 428.4 },
-    { at: 'W', e: 0.1, count: 3, left: 0.0207, settledS: 1238.5 },
-    { at: 'N', e: 0, count: 1, left: 1.00198, settledS: 4917.8 },
-    { at: 'N', e: 0.02, count: 2, left: 0.0339384, settledS: 1519.5 },
-    { at: 'N', e: 0.05, count: 2, left: 0.0765124, settledS: 2393.5 },
-    { at: 'N', e: 0, count: 3, left: 0.0005319, settledS: 421.8 },
-    { at: 'N', e: 0.1, count: 3, left: 0.02066, settledS: 1238.7 },
-  ] as const)('$count of them, the period off by $e, on rig $at: settled after $settledS s', ({ at, e, count, left, settledS }) => {
-    const periodS = (1 + e) * { W: 419.99664926, N: 421.84230327 }[at];
-    const found = byRule({ W, N }[at], { K: near[at].K, periodS, count });
-    expect(Math.abs(found.residual - left)).toBeLessThan(Math.max(2e-3 * left, 1e-6));
-    expect(Math.abs(found.settledS - settledS)).toBeLessThan(2);
-  });
-
-  // a / v in deg/s² and deg/s; the residuals are given to two digits.
-  test.each([
-    [4, 8, 0.0044, 0.0055],
-    [1, 3, 0.0045, 0.0057],
-    [0.5, 1.5, 0.0046, 0.0081],
-    [0.2, 1, 0.0046, 0.014],
-  ])('timed by torque centroids leave the published residuals at %f deg/s² and %f deg/s', (accelerationDegS2, speedDegS, w, n) => {
-    const slew = { speedDegS, accelerationDegS2 };
-    expect(Math.abs(rule(W, near.W.K, 419.99664926, slew).residual - w)).toBeLessThan(1e-4);
-    expect(Math.abs(rule(N, near.N.K, 421.84230327, slew).residual - n)).toBeLessThan(6e-4);
   });
 });
 

@@ -11,26 +11,22 @@ const zeros = (n: number) => new Array<number>(n).fill(0);
 /** Check values of this block: independent computation in double precision. */
 describe('the cost of removing drift', () => {
   test.each([
-    { n: 4, aba: 1.25, first: 1.25, second: 1.25 },
-    { n: 5, aba: 1.25, first: 1.0416667, second: 1.3671875 },
-    { n: 6, aba: 1.21875, first: 1.09375, second: 1.09375 },
-    { n: 8, aba: 1.1666667, first: 1.05, second: 1.05 },
-    { n: 10, aba: 1.1328125, first: 1.03125, second: 1.03125 },
-    { n: 16, aba: 1.081632653, first: 1.011904762, second: 1.011904762 },
-    { n: 30, aba: 1.042729592, first: 1.003348214, second: 1.003348214 },
-    { n: 48, aba: 1.026465028, first: 1.001304348, second: 1.001304348 },
-  ])('is as published for $n dwells', ({ n, aba, first, second }) => {
+    { n: 4, aba: 1.25, first: 1.25, second: 1.25, third: null },
+    { n: 5, aba: 1.25, first: 1.0416667, second: 1.3671875, third: 1.3671875 },
+    { n: 6, aba: 1.21875, first: 1.09375, second: 1.09375, third: 1.4765625 },
+    { n: 8, aba: 1.1666667, first: 1.05, second: 1.05, third: 1.203125 },
+    { n: 10, aba: 1.1328125, first: 1.03125, second: 1.03125, third: 1.1171875 },
+    { n: 16, aba: 1.081632653, first: 1.011904762, second: 1.011904762, third: 1.041418651 },
+    { n: 30, aba: 1.042729592, first: 1.003348214, second: 1.003348214, third: 1.011293279 },
+    { n: 48, aba: 1.026465028, first: 1.001304348, second: 1.001304348, third: 1.004367779 },
+  ])('is as published for $n dwells (D2)', ({ n, aba, first, second, third }) => {
     const series = alternating(zeros(n));
     expect(relativeDifference(costOf(abaDifference(series).weights), aba)).toBeLessThan(5e-8);
     expect(relativeDifference(costOf(polynomialDifference(series, 1).weights), first)).toBeLessThan(5e-8);
     expect(relativeDifference(costOf(polynomialDifference(series, 2).weights), second)).toBeLessThan(5e-8);
-  });
-
-  test.each([
-    { n: 16, third: 1.041418651 },
-    { n: 30, third: 1.011293279 },
-  ])('is as published for a cubic in $n dwells', ({ n, third }) => {
-    expect(relativeDifference(costOf(polynomialDifference(alternating(zeros(n)), 3).weights), third)).toBeLessThan(5e-8);
+    // Four dwells do not determine a cubic beside the difference.
+    if (third === null) expect(polynomialDifference(series, 3).order).toBe(2);
+    else expect(relativeDifference(costOf(polynomialDifference(series, 3).weights), third)).toBeLessThan(5e-8);
   });
 
   test('comes from the published weights', () => {
