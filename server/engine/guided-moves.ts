@@ -1,16 +1,10 @@
 import type { Cancel, Clock } from '../interfaces/clock';
 import type { ControllerLimits, LinkEvent, TeachOutcome, TurntableLink } from '../interfaces/turntable-link';
-import {
-  assertHoming,
-  assertNudge,
-  GuidedRefused,
-  homingLimitMs,
-  type GuidedRequest,
-  type GuidedRig,
-  type MoveRequest,
-} from './guided-orders';
+import { assertHoming, assertNudge, GuidedRefused, type GuidedRequest, type GuidedRig, type MoveRequest } from './guided-orders';
 import { beginGuided, heardGuided, isUnderWay, withOrder, type GuidedState } from './guided-state';
+import { homingLimitMs } from './homing-limit';
 import type { Arm } from './run-context';
+import { motionGraceMs } from './timing';
 
 export interface GuidedParts {
   clock: Clock;
@@ -302,7 +296,7 @@ export class GuidedMoves {
 
   private limitHoming(session: OpenSession): void {
     const { rig, orders } = session;
-    session.cancelLimit = this.parts.clock.after(homingLimitMs(rig.motion), () => {
+    session.cancelLimit = this.parts.clock.after(homingLimitMs(rig.motion, null) + motionGraceMs(0), () => {
       const name = 'the server: the edge of the home flag was not found in the time that the whole way takes';
       if (session.orders === orders && isUnderWay(session.state)) this.halt(rig, 'hold', { id: '', name });
     });

@@ -1,9 +1,7 @@
-import { homeSpeedDegS } from '@/shared/protocol/durations';
 import { homingObstacle, isWound } from '@/shared/protocol/homing';
 import type { RigDocument, RigMotion } from '@/shared/rig/document';
-import { freeTurns, keepOutEntered } from '@/shared/rig/travel';
+import { keepOutEntered } from '@/shared/rig/travel';
 import type { TurntableLink } from '../interfaces/turntable-link';
-import { motionGraceMs } from './timing';
 
 /** What a person at the rig may order in a guided first move, and what stands against it. */
 
@@ -79,13 +77,4 @@ export function assertHoming(
       'not-possible-now',
       `The rig does not home by itself: ${obstacle}.${mayLook ? ' Say that you look at the gap, or correct the rig document.' : ''}`,
     );
-}
-
-/**
- * When homing is given up, ms: after twice the travel of swings at home speed, to find the flag and to come back to its edge. On a table that
- * makes whole turns the flag covers half of each, so that one turn is enough, and no more of its cables is wound up where the flag is broken.
- */
-export function homingLimitMs(motion: RigMotion): number {
-  const wayDeg = freeTurns(motion) > 0 ? 360 : 2 * (motion.maxDeg - motion.minDeg);
-  return (1000 * wayDeg) / homeSpeedDegS(motion) + motionGraceMs(0);
 }

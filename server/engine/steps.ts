@@ -3,7 +3,6 @@ import type { Step } from '@/shared/protocol/document';
 import {
   dwellEndUtcMs,
   homeDurationS,
-  homeSpeedDegS,
   motionOf,
   settleEndUtcMs,
   type SwingMove,
@@ -17,14 +16,13 @@ import { stationAt } from '@/shared/protocol/stations';
 import type { PassOrder } from '@/shared/protocol/shuffle';
 import { moveOf, partsOf, rotationHomeDeg } from '@/shared/protocol/step-parts';
 import { waitOf } from '@/shared/protocol/wait';
-import type { RigMotion } from '@/shared/rig/document';
-import { freeTurns } from '@/shared/rig/travel';
 import type { Instant } from '../interfaces/clock';
 import { beginAwaiting } from './awaiting';
 import { cursorMoment, holdOfDwells, lookAtDwell } from './dwells';
 import type { Draft } from './draft';
 import { noteOrders } from './orders';
 import { heedFinishing } from './finishing';
+import { homingLimitMs } from './homing-limit';
 import { runProof } from './proofs';
 import { newRow, stationOf, toleranceDeg } from './rows';
 import type { ActiveStep, Motion, RunContext } from './run-context';
@@ -176,7 +174,7 @@ export function beginHome(draft: Draft, item: PlannedItem): void {
     commandId,
     targetDeg: null,
     startUtcMs: null,
-    durationMs: homeLimitMs(motionLimits, durationMs),
+    durationMs: homingLimitMs(motionLimits, durationMs),
     late: false,
     began: false,
     reached: false,
@@ -185,14 +183,6 @@ export function beginHome(draft: Draft, item: PlannedItem): void {
   context.swingStartUtcMs = null;
   context.deadlineUtcMs = draft.nowUtcMs + motion.durationMs + motionGraceMs(motion.durationMs);
   context.next = 'homing';
-}
-
-/**
- * Homing gives up after the whole travel at home speed, once to find the flag and once to come back to its edge. A table that may make whole
- * turns would wind up its cables meanwhile, where the flag is broken: its position is known, and homing takes no longer than planned.
- */
-function homeLimitMs(motion: RigMotion, plannedMs: number): number {
-  return freeTurns(motion) > 0 ? plannedMs : (2000 * (motion.maxDeg - motion.minDeg)) / homeSpeedDegS(motion);
 }
 
 export interface SwingStart {

@@ -4,6 +4,7 @@ import { leverOf } from '../physics/lever';
 import { inertiaKgM2 } from '../physics/oscillator';
 import type { RigDocument } from '../rig/document';
 import type { Law } from '../statistics/draws';
+import { cholesky, SingularMatrixError, type Matrix } from '../statistics/symmetric';
 import type { Analysis } from './analysis';
 import { axisOffsetOf } from './axis-offset';
 import { budgetOf, derivative, type Budget, type BudgetTerm, type Correlation, type ObservedTerm } from './budget';
@@ -68,12 +69,31 @@ export function supposedG(documented: RigDocument, basis: GBasis, supposed: Supp
 
 function correlationsOf({ together }: GBasis): Correlation[] {
   if (together === undefined) return [];
-  return [
+  return possible([
     { of: ['reversal_rad', 'period_s'], r: together.reversalPeriod },
     { of: ['reversal_rad', 'decayTime_s'], r: together.reversalDecayTime },
     { of: ['period_s', 'decayTime_s'], r: together.periodDecayTime },
-  ];
+  ]);
 }
+
+/** Coefficients from few dwells may contradict each other: then all are taken smaller alike until they no longer do. */
+function possible(correlations: Correlation[]): Correlation[] {
+  try {
+    cholesky(matrixOf(correlations));
+    return correlations;
+  } catch (error) {
+    if (!(error instanceof SingularMatrixError)) throw error;
+    return possible(correlations.map(({ of, r }) => ({ of, r: 0.95 * r })));
+  }
+}
+
+/** The observed inputs that err together, as their rows stand in the matrix of their correlations. */
+const observedOrder = ['reversal_rad', 'period_s', 'decayTime_s'] as const;
+
+const matrixOf = (correlations: readonly Correlation[]): Matrix =>
+  observedOrder.map((a) =>
+    observedOrder.map((b) => (a === b ? 1 : (correlations.find(({ of }) => of.includes(a) && of.includes(b))?.r ?? 0))),
+  );
 
 /** The budget of G by the time of swing: what the frequencies leave open stands in the line of the period. */
 export function periodBudget(rig: RigDocument, outcome: PeriodOutcome, segments: Analysis['segments']): Budget {
@@ -201,23 +221,12 @@ export function trialModelOf(
   };
 }
 
-/** Of what independent deviates that of an input is made, where it errs together with inputs drawn before it (Cholesky). */
+/** Of what independent deviates that of an input is made, where it errs together with inputs drawn before it. */
 function mixOf(input: string, correlations: readonly Correlation[]): Pick<TrialInput, 'mix'> {
-  const order = ['reversal_rad', 'period_s', 'decayTime_s'] as const;
-  const row = order.findIndex((name) => name === input);
+  const row = observedOrder.findIndex((name) => name === input);
   if (row < 1 || correlations.length === 0) return {};
-  const r = (i: number, j: number) => correlations.find(({ of }) => of[0] === order[j] && of[1] === order[i])?.r ?? 0;
-  const factors: number[][] = [[1]];
-  for (let i = 1; i <= row; i += 1) {
-    const own: number[] = [];
-    for (let j = 0; j < i; j += 1) {
-      const known = factors[j] as number[];
-      const before = own.reduce((sum, factor, k) => sum + factor * (known[k] as number), 0);
-      own.push((r(i, j) - before) / (known[j] as number));
-    }
-    factors.push([...own, Math.sqrt(Math.max(0.01, 1 - own.reduce((sum, factor) => sum + factor * factor, 0)))]);
-  }
-  return { mix: (factors[row] as number[]).map((factor, k) => ({ input: order[k] as string, factor })) };
+  const factors = cholesky(matrixOf(correlations))[row] as number[];
+  return { mix: observedOrder.slice(0, row + 1).map((name, k) => ({ input: name, factor: factors[k] as number })) };
 }
 
 function lawOf({ nu, rectangular }: BudgetTerm): Law {
