@@ -7,7 +7,7 @@ import { formatDeflectionUncertain } from '@/shared/lib/format-angle';
 import { formatPercent, formatSignificant } from '@/shared/lib/format-number';
 import { formatDay } from '@/shared/lib/format-time';
 import { formatUncertain } from '@/shared/lib/format-uncertain';
-import { differenceInU, meanBefore, qualityOf } from '@/shared/morning/earlier-nights';
+import { differenceInU, meanBefore, nightsTogether, qualityOf } from '@/shared/morning/earlier-nights';
 
 const inMrad = ({ value, u }: MorningNight['reversal_rad']) => ({ value: value * 1e3, u: u === null ? null : u * 1e3 });
 
@@ -25,7 +25,26 @@ export function NearFar({ sheet, rehearsal, timeZone }: { sheet: MorningSheet; r
       {earlier.map((night) => (
         <EarlierNight key={night.runId} night={night} tonight={tonight} timeZone={timeZone} />
       ))}
+      <NightsTogether tonight={tonight} earlier={earlier} />
     </Panel>
+  );
+}
+
+/** What they come to, if nothing at the rig was changed between them: both ways to take more scatter than their u say, for they may differ. */
+function NightsTogether({ tonight, earlier }: { tonight: MorningNight; earlier: readonly MorningNight[] }) {
+  const together = nightsTogether(tonight, earlier);
+  if (together === null) return null;
+  const { nights, common, widenedU, own } = together;
+  const ofOwn = `or ${formatDeflectionUncertain({ value: own.mean, u: own.u })} if each night has ${formatSignificant(own.scatter * 1e6, 2)}\u202fµrad of its own`;
+  return (
+    <View className="flex-row flex-wrap items-baseline gap-x-3" testID="nights-together">
+      <Num size={13}>{formatDeflectionUncertain({ value: common.mean, u: widenedU })}</Num>
+      <Label>
+        {own.scatter === 0
+          ? `${nights} nights together, which scatter no more than their u say`
+          : `${nights} nights together, which scatter ${formatSignificant(widenedU / common.u, 2)} times as much as their u say: u is so much greater; ${ofOwn}`}
+      </Label>
+    </View>
   );
 }
 

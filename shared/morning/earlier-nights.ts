@@ -1,4 +1,5 @@
 import type { MorningNight } from '../contracts/morning';
+import { combined, type Combined } from '../statistics/between-groups';
 
 /** One night beside those before it. */
 
@@ -34,4 +35,16 @@ export function meanBefore(earlier: readonly MorningNight[], pick: (night: Morni
     return found === null ? [] : [found.value];
   });
   return values.length === 0 ? null : values.reduce((sum, value) => sum + value, 0) / values.length;
+}
+
+/** Fewer nights do not tell whether they scatter more than their u say. */
+const enoughNights = 3;
+
+/** Near minus far of this night and of those before it that were of its kind, with masses or without; null where fewer than three have a u. */
+export function nightsTogether(tonight: MorningNight, earlier: readonly MorningNight[]): (Combined & { nights: number }) | null {
+  const values = [tonight, ...earlier.filter(({ control }) => control === tonight.control)].flatMap(({ reversal_rad: { value, u } }) =>
+    u !== null && u > 0 ? [{ value, u }] : [],
+  );
+  const found = values.length < enoughNights ? null : combined(values);
+  return found === null ? null : { ...found, nights: values.length };
 }

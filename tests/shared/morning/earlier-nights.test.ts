@@ -1,5 +1,5 @@
 import type { MorningNight } from '@/shared/contracts/morning';
-import { differenceInU, meanBefore, qualityOf } from '@/shared/morning/earlier-nights';
+import { differenceInU, meanBefore, nightsTogether, qualityOf } from '@/shared/morning/earlier-nights';
 import { oscillatorOf } from '@/shared/physics/oscillator';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 
@@ -38,4 +38,23 @@ test('the mean of earlier nights leaves the control out, and those without the q
   const nights = [night(600), night(604), night(900, true), { ...night(0), period_s: null }];
   expect(meanBefore(nights, ({ period_s }) => period_s)).toBe(602);
   expect(meanBefore(nights, ({ kappa_N_m }) => kappa_N_m)).toBeNull();
+});
+
+describe('near minus far of several nights', () => {
+  const of = (value: number, u: number | null, control = false): MorningNight => ({ ...night(600, control), reversal_rad: { value, u } });
+
+  test('is their mean, with what each night has of its own where they scatter more than their u say', () => {
+    // Equal u of 1 and a variance of 16: the scatter of a night is √15, u of the mean 4/√3.
+    const found = nightsTogether(of(4, 1), [of(0, 1), of(-4, 1), of(100, 1, true), of(50, null)]);
+    expect(found).toMatchObject({ nights: 3 });
+    expect(found?.common.mean).toBeCloseTo(0, 12);
+    expect(found?.widenedU).toBeCloseTo(4 / Math.sqrt(3), 9);
+    expect(found?.own.scatter).toBeCloseTo(Math.sqrt(15), 9);
+    expect(found?.own.u).toBeCloseTo(4 / Math.sqrt(3), 9);
+  });
+
+  test('of controls is that of controls; two nights tell no scatter', () => {
+    expect(nightsTogether(of(1, 1, true), [of(2, 1), of(3, 1), of(4, 1)])).toBeNull();
+    expect(nightsTogether(of(1, 1), [of(2, 1)])).toBeNull();
+  });
 });
