@@ -22,6 +22,7 @@ const inWords: Record<string, string> = {
   'stations.far': 'angle of far',
   'measured.period_s': 'period, sources away',
   'measured.decayTime_s': 'decay time, sources away',
+  correlation: 'near − far, period and decay time err together',
   'correlation.reversal_rad.period_s': 'near − far and period err together',
   'correlation.reversal_rad.decayTime_s': 'near − far and decay time err together',
   'correlation.period_s.decayTime_s': 'period and decay time err together',

@@ -1,7 +1,7 @@
 import type { Finding } from '../protocol/finding';
 import type { RigDocument } from '../rig/document';
 import { excursionFindings, nearLimitAdvice } from './excursion';
-import type { PredictedU } from './plan-uncertainty';
+import { together, type PredictedU } from './plan-uncertainty';
 
 /** The noise counts as small beside the geometry below this share of it. */
 const smallShare = 0.1;
@@ -16,7 +16,7 @@ function geometryDecides(predicted: PredictedU | null): Finding[] {
   if (predicted === null) return [];
   const { bySource, statistics } = predicted;
   const [source, u] = Object.entries(bySource)
-    .filter(([name]) => name !== 'reversal_rad')
+    .filter(([name]) => name !== 'reversal_rad' && name !== together)
     .reduce((a, b) => (b[1] > a[1] ? b : a), ['', 0]);
   if (!(statistics < smallShare * u)) return [];
   return [

@@ -1,6 +1,6 @@
 import type { RigDocument } from '../rig/document';
 import type { Cadence } from './night-noise';
-import { predictU, type PredictedU } from './plan-uncertainty';
+import { predictU, together, type PredictedU } from './plan-uncertainty';
 import { strategyNights, type StrategyNight } from './strategies';
 
 /** What a planned night is expected to give, and what else could be done with its hours. */
@@ -15,7 +15,7 @@ export interface NightForecast {
   strategies: StrategyNight[];
 }
 
-/** The rule: pairs are enough when u(G) is at most so many times what it would be without any noise of the dwells. */
+/** The rule: pairs are enough when u(G) is at most so many times what it would be after very many, without any noise of their dwells. */
 const enough = 1.05;
 const mostPairs = 1024;
 
@@ -28,23 +28,22 @@ export function forecastNight(rig: RigDocument, cadence: Cadence, durationS: num
     cadence,
     predicted,
     wandering: Math.sqrt(Math.max(0, predicted.statistics ** 2 - (still?.statistics ?? 0) ** 2)),
-    enoughPairs: fewestPairs(rig, cadence, (night) => night.relativeU <= enough * restOf(night)),
+    enoughPairs: enoughPairs(rig, cadence),
     strategies: strategyNights(rig, { durationS, calibrations: cadence.calibrations }),
   };
 }
 
-const restOf = ({ relativeU, statistics }: Pick<PredictedU, 'relativeU' | 'statistics'>) =>
-  Math.sqrt(Math.max(0, relativeU ** 2 - statistics ** 2));
+function enoughPairs(rig: RigDocument, cadence: Cadence): number | null {
+  const most = predictU(rig, { ...cadence, dwells: 2 * mostPairs });
+  if (most === null) return null;
+  const { relativeU, statistics, bySource } = most;
+  const rest = Math.sqrt(Math.max(0, relativeU ** 2 - statistics ** 2 - (bySource[together] ?? 0) ** 2));
+  return pairsToReach(rig, cadence, enough * rest);
+}
 
 /** Fewest pairs at the cadence's beat that bring the relative u of G down to `wanted`; null where no number of them does. */
-export const pairsToReach = (rig: RigDocument, cadence: Cadence, wanted: number): number | null =>
-  fewestPairs(rig, cadence, ({ relativeU }) => relativeU <= wanted);
-
-function fewestPairs(rig: RigDocument, cadence: Cadence, isEnough: (predicted: PredictedU) => boolean): number | null {
-  const does = (pairs: number) => {
-    const predicted = predictU(rig, { ...cadence, dwells: 2 * pairs });
-    return predicted !== null && isEnough(predicted);
-  };
+export function pairsToReach(rig: RigDocument, cadence: Cadence, wanted: number): number | null {
+  const does = (pairs: number) => (predictU(rig, { ...cadence, dwells: 2 * pairs })?.relativeU ?? Infinity) <= wanted;
   if (!does(mostPairs)) return null;
   let [few, many] = [0, 1];
   while (!does(many)) [few, many] = [many, 2 * many];

@@ -2,10 +2,9 @@ import { BOLTZMANN_J_K } from '../physics/constants';
 import { oscillatorOf, type Oscillator } from '../physics/oscillator';
 import type { RigDocument } from '../rig/document';
 import { abaDifference } from '../statistics/drift';
-import { offset, ringDownSegment } from '../statistics/ring-down';
 import { at, bilinear, invertSymmetric, type Matrix } from '../statistics/symmetric';
-import { solveAtFixedAlpha } from '../statistics/variable-projection';
 import type { Calibration } from './calibration';
+import { fittedRecording, type FittedRecording } from './fitted-recording';
 
 /** What an alternating night of dwells leaves open by its noise (physics.md J1). */
 
@@ -17,34 +16,17 @@ export interface Cadence {
   cycleS: number;
   /** Ring-downs after a kick, from which the ringing of the dwells is told too, so that each has only its own amplitudes to find. */
   calibrations: readonly Calibration[];
-  /** The dwells hold ringing that has to be fitted at all. */
+  /** The dwells hold ringing that tells ω and γ, and that an error of these shifts. */
   rings: boolean;
 }
 
 /** Samples a second, where nobody says otherwise. */
 const usualRateHz = 10;
-const dataPerDwell = 240;
 
-/**
- * Variance of the fitted centre of one dwell over that of a plain mean of its samples (physics.md C4): columns for drift and ringing cost,
- * and much more so when ω and γ have to come from the same dwell.
- */
-export function inflation(oscillator: Oscillator, dwellS: number, { calibrated }: { calibrated: boolean }): number {
-  const fit = unitFit(oscillator, dwellS);
-  const segment = fit.segments[0];
-  if (segment === undefined) return Infinity;
-  const known = at(segment.inverseNormal, offset, offset);
-  if (calibrated) return dataPerDwell * known;
-  const shift = segment.shift[offset] as number[];
-  const covariance = invertSymmetric(fit.information);
-  return dataPerDwell * (known + shift.reduce((sum, a, i) => sum + shift.reduce((own, b, j) => own + a * at(covariance, i, j) * b, 0), 0));
-}
-
-/** So long a recording that rings with an amplitude of 1. */
-function unitFit({ omegaD, gamma }: Oscillator, lengthS: number) {
-  const tS = Float64Array.from({ length: dataPerDwell }, (_, k) => (lengthS * (k + 0.5)) / dataPerDwell);
-  const y = tS.map((t) => Math.exp(-gamma * t) * Math.cos(omegaD * t));
-  return solveAtFixedAlpha([ringDownSegment({ tS, y })], [omegaD, gamma]);
+/** Noise of the rig's record: of a reading in rad2/Hz, and what the zero's walk gains in a second, rad2/s. */
+function densities({ noise }: RigDocument): { white: number; walk: number } {
+  const { readout_rad: readout = 0, walk_rad_per_sqrt_min: walk = 0 } = noise ?? {};
+  return { white: readout ** 2 / usualRateHz, walk: walk ** 2 / 60 };
 }
 
 /** Steady ringing at the start of a dwell when near and far alternate with a step of 1 (physics.md J2). */
@@ -57,27 +39,21 @@ function ringing({ omegaD, gamma }: Oscillator, cycleS: number): number {
 export function differenceU(rig: RigDocument, cadence: Cadence, signalRad: number): number | null {
   const oscillator = oscillatorOf(rig);
   if (oscillator === null || cadence.dwells < 2 || !(cadence.dwellS > 0)) return null;
-  const { readout_rad: readout = 0, walk_rad_per_sqrt_min: walk = 0, temperature_K: temperature = 0 } = rig.noise ?? {};
-  const { dwellS, cycleS, dwells } = cadence;
-  const { inertiaKgM2, gamma, kappa } = oscillator;
-  const inflated = cadence.rings ? inflation(oscillator, dwellS, { calibrated: true }) : 1;
-  const white = (inflated * readout ** 2) / (usualRateHz * dwellS);
-  const thermal = (8 * BOLTZMANN_J_K * temperature * inertiaKgM2 * gamma) / (kappa * kappa) / (2 * dwellS);
-  const weights = weightsOf(dwells);
+  const { white, walk } = densities(rig);
+  const dwell = fittedRecording(oscillator, cadence.dwellS);
+  const weights = weightsOf(cadence.dwells);
   const squares = weights.reduce((sum, w) => sum + w * w, 0);
-  const scatter = (white + thermal) * squares + (walk ** 2 / 60) * wanderingS(weights, { dwellS, cycleS });
-  return Math.sqrt(scatter + coherent(rig, cadence, { oscillator, signalRad }));
+  const own = (dwell.inflation * white) / cadence.dwellS + thermal(rig, oscillator, dwell);
+  const scatter = own * squares + walk * wanderingS(weights, cadence, dwell.walk);
+  return Math.sqrt(Math.max(0, scatter + (told(rig, cadence, signalRad)?.added ?? 0)));
 }
 
-/**
- * What an error of ω and γ does to near minus far, as a variance: near and far ring in opposite senses, so it shifts their centres in
- * opposite senses too (physics.md C4).
- */
-function coherent(rig: RigDocument, cadence: Cadence, { oscillator, signalRad }: { oscillator: Oscillator; signalRad: number }): number {
-  const covariance = pendulumCovariance(rig, cadence, signalRad);
-  const shift = unitFit(oscillator, cadence.dwellS).segments[0]?.shift[offset];
-  if (covariance === null || shift === undefined) return 0;
-  return (2 * signalRad * ringing(oscillator, cadence.cycleS)) ** 2 * bilinear(shift, covariance, shift);
+/** Variance that the air's or the fibre's heat gives the centre of a dwell, rad2 (physics.md I1). */
+function thermal({ noise }: RigDocument, { kappa, omegaD, gamma }: Oscillator, { varianceBy }: FittedRecording): number {
+  const { temperature_K: temperature = 0 } = noise ?? {};
+  if (temperature === 0) return 0;
+  const correlation = (lagS: number) => Math.exp(-gamma * lagS) * (Math.cos(omegaD * lagS) + (gamma / omegaD) * Math.sin(omegaD * lagS));
+  return ((BOLTZMANN_J_K * temperature) / kappa) * varianceBy(correlation);
 }
 
 /** What near minus far is made of, dwell by dwell: ABA windows, a plain difference of two. */
@@ -87,39 +63,60 @@ function weightsOf(dwells: number): number[] {
 }
 
 /**
- * Variance of the weighted sum of dwell means of a random walk that gains a variance of 1 a second, s: the square of what each instant's
- * step weighs, over the night. For many dwells it comes to (3 t_c − 2 t_d)/3 over their number (physics.md J1).
+ * Variance of the weighted sum of dwells of a random walk that gains a variance of 1 a second, s: the square of what each instant's
+ * step weighs, over the night. For many dwells it comes to nearly (3 t_c − 2 t_d)/3 over their number (physics.md J1).
  */
-function wanderingS(weights: readonly number[], { dwellS, cycleS }: Pick<Cadence, 'dwellS' | 'cycleS'>): number {
-  let before = weights.reduce((sum, w) => sum + w, 0);
+function wanderingS(
+  weights: readonly number[],
+  { dwellS, cycleS }: Pick<Cadence, 'dwellS' | 'cycleS'>,
+  { mean, square }: FittedRecording['walk'],
+): number {
+  let after = weights.reduce((sum, w) => sum + w, 0);
   let variance = 0;
   for (const w of weights) {
-    const after = before - w;
-    variance += (dwellS * (before * before + before * after + after * after)) / 3 + (cycleS - dwellS) * after * after;
-    before = after;
+    after -= w;
+    variance += dwellS * (w * w * square + 2 * w * after * mean + after * after) + (cycleS - dwellS) * after * after;
   }
   return variance;
 }
 
-/** No reading is quite without noise, rad2/Hz. */
-const leastDensity = 1e-25;
+/** What the ringing of the night itself tells, in its dwells and after its kicks. */
+export interface Told {
+  /** Of ω (rad/s) and γ (1/s). */
+  covariance: Matrix;
+  /** Covariance of near minus far (rad) with ω and with γ. */
+  withDifference: [number, number];
+  /** What their errors add to the variance of near minus far, rad2. */
+  added: number;
+}
 
 /**
- * Covariance of ω (rad/s) and γ (1/s) as the ringing of the night itself tells them, in its dwells and after its kicks, if near minus far is
- * so many rad; null where nothing rings.
+ * Near and far ring in opposite senses, so an error of ω and γ shifts their centres in opposite senses too (physics.md C4); and a walk of the zero
+ * within a dwell moves both its centre and what it says about ω and γ. Null where nothing rings.
  */
-export function pendulumCovariance(rig: RigDocument, cadence: Cadence, signalRad: number): Matrix | null {
+export function told(rig: RigDocument, cadence: Cadence, signalRad: number): Told | null {
   const oscillator = oscillatorOf(rig);
-  if (oscillator === null || !cadence.rings || cadence.dwells < 1) return null;
-  const { readout_rad: readout = 0, walk_rad_per_sqrt_min: walk = 0 } = rig.noise ?? {};
-  // What a wandering zero has at the pendulum's own frequency counts as much as the readout's.
-  const density = Math.max(readout ** 2 / usualRateHz + walk ** 2 / 60 / oscillator.omegaD ** 2, leastDensity);
-  const inDwells = { count: cadence.dwells, lengthS: cadence.dwellS, amplitudeRad: signalRad * ringing(oscillator, cadence.cycleS) };
-  const recordings = [inDwells, ...cadence.calibrations.map((one) => ({ count: 1, ...one }))];
-  const parts = recordings.map(({ count, lengthS, amplitudeRad }) => ({
-    information: unitFit(oscillator, lengthS).information,
-    scale: (count * amplitudeRad ** 2 * lengthS) / dataPerDwell / density,
-  }));
-  const sum = (i: number, j: number) => parts.reduce((total, { information, scale }) => total + scale * at(information, i, j), 0);
-  return invertSymmetric([0, 1].map((i) => [0, 1].map((j) => sum(i, j))));
+  if (oscillator === null || cadence.dwells < 1 || (!cadence.rings && cadence.calibrations.length === 0)) return null;
+  const { white, walk } = densities(rig);
+  const dwell = fittedRecording(oscillator, cadence.dwellS);
+  const amplitudeRad = cadence.rings ? signalRad * ringing(oscillator, cadence.cycleS) : 0;
+  const recordings = [
+    { ...dwell, squares: cadence.dwells * amplitudeRad ** 2 },
+    ...cadence.calibrations.map((one) => ({ ...fittedRecording(oscillator, one.lengthS), squares: one.amplitudeRad ** 2 })),
+  ];
+  const over = (of: (recording: FittedRecording) => Matrix) =>
+    [0, 1].map((i) => [0, 1].map((j) => recordings.reduce((sum, one) => sum + one.squares * at(of(one), i, j), 0)));
+  const inverse = invertSymmetric(over(({ information }) => information));
+  const walked = over((one) => one.walk.pendulum);
+  const covariance = inverse.map((a, i) => inverse.map((b, j) => white * at(inverse, i, j) + walk * bilinear(a, walked, b)));
+  // From the place that it left the pendulum starts each dwell on the far side of the other.
+  const both = -2 * amplitudeRad;
+  const own = inverse.map((row) => both * walk * row.reduce((sum, one, i) => sum + one * (dwell.walk.withPendulum[i] as number), 0));
+  const shift = dwell.shift.map((one) => both * one);
+  const withDifference = own.map((one, j) => one + shift.reduce((sum, by, i) => sum + by * at(covariance, i, j), 0));
+  return {
+    covariance,
+    withDifference: withDifference as [number, number],
+    added: bilinear(shift, covariance, shift) + 2 * shift.reduce((sum, by, i) => sum + by * (own[i] as number), 0),
+  };
 }

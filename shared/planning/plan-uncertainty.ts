@@ -1,12 +1,17 @@
 import { axisOffsetOf } from '../evaluation/axis-offset';
-import { budgetOf, derivative, type BudgetTerm, type ObservedTerm } from '../evaluation/budget';
+import { budgetOf, derivative, type BudgetTerm, type Correlation, type ObservedTerm } from '../evaluation/budget';
+import { isCorrelation } from '../evaluation/input-words';
+import type { BudgetLine } from '../evaluation/result';
 import { CODATA_2022_G, RAD_PER_DEG } from '../physics/constants';
 import { equilibriumRad } from '../physics/equilibrium';
 import { inertiaKgM2, oscillatorOf, type Oscillator } from '../physics/oscillator';
 import { geometryOf, torquePerG } from '../physics/torque';
 import type { RigDocument } from '../rig/document';
 import { at } from '../statistics/symmetric';
-import { differenceU, pendulumCovariance, type Cadence } from './night-noise';
+import { differenceU, told, type Cadence } from './night-noise';
+
+/** What near minus far, period and decay time leave open because the same dwells tell all three. */
+export const together = 'correlation';
 
 /** u of G after a night, by what it comes from. */
 export interface PredictedU {
@@ -24,7 +29,7 @@ export interface PredictedU {
 export function predictU(rig: RigDocument, cadence: Cadence): PredictedU | null {
   const parts = documentedBudget(rig, ({ signal, oscillator: { periodS, decayTimeS } }) => {
     const u = differenceU(rig, cadence, signal);
-    return u === null ? null : { signal: u, ...pendulumU(rig, cadence, { signal, periodS, decayTimeS }) };
+    return u === null ? null : ofNight(rig, cadence, { signal, u, periodS, decayTimeS });
   });
   if (parts === null) return null;
   const bySource = Object.fromEntries(parts.map(({ source, relativeU }) => [source, relativeU]));
@@ -41,11 +46,12 @@ export interface BudgetPart {
   halved: number;
 }
 
-/** Standard uncertainties of near minus far (rad), period and decay time (s). */
+/** Standard uncertainties of near minus far (rad), period and decay time (s), and how they err together. */
 interface ObservedU {
   signal: number;
   period: number;
   decay: number;
+  correlations?: Correlation[];
 }
 
 /** The budget of G of a rig as documented, whose observation is as uncertain as said. Null where the rig does not tell enough. */
@@ -89,15 +95,32 @@ export function documentedBudget(
       term('decayTime_s', decayTimeS, { u: known.decay, slope: slopeBy('decayTimeS', decayTimeS) }),
     ],
     axisOffset: axisOffsetOf(rig),
+    correlations: known.correlations ?? [],
   });
   const lever = rig.lever === undefined ? 0 : rig.lever.distance.u / rig.lever.distance.value;
-  const parts = grouped(budget.terms).map(({ source, inputs, signed, halved }) => ({
+  const alone = grouped(budget.terms).map(({ source, inputs, signed, halved }) => ({
     source,
     inputs,
     relativeU: Math.abs(signed) / bigG,
     halved: Math.abs(halved) / bigG,
   }));
+  const parts = withTogether(alone, budget.lines, bigG);
   return lever > 0 ? [...parts, { source: 'lever.distance', inputs: ['lever.distance'], relativeU: lever, halved: lever / 2 }] : parts;
+}
+
+/**
+ * What erring together adds to the square of u is a part of its own; where it takes something away, the parts concerned are smaller alike, so that the
+ * sum of all squares remains that of u.
+ */
+function withTogether(parts: BudgetPart[], lines: readonly BudgetLine[], bigG: number): BudgetPart[] {
+  const added =
+    lines.reduce((sum, one) => sum + (isCorrelation(one.input) ? Math.sign(one.share) * one.contribution ** 2 : 0), 0) / bigG ** 2;
+  if (added === 0) return parts;
+  const inputs: string[] = ['reversal_rad', 'period_s', 'decayTime_s'];
+  if (added > 0) return [...parts, { source: together, inputs, relativeU: Math.sqrt(added), halved: Math.sqrt(added) / 2 }];
+  const squares = parts.reduce((sum, { source, relativeU }) => sum + (inputs.includes(source) ? relativeU ** 2 : 0), 0);
+  const left = Math.sqrt(Math.max(0, 1 + added / squares));
+  return parts.map((one) => (inputs.includes(one.source) ? { ...one, relativeU: left * one.relativeU, halved: left * one.halved } : one));
 }
 
 /** Inputs of one group share their error, so they stand together. */
@@ -115,17 +138,38 @@ function grouped(terms: readonly BudgetTerm[]): { source: string; inputs: string
   return [...sums.values()];
 }
 
-/** u of period and decay time, s, of the means weighted by u⁻². */
-function pendulumU(
-  rig: RigDocument,
-  cadence: Cadence,
-  { signal, periodS, decayTimeS }: { signal: number; periodS: number; decayTimeS: number },
-): { period: number; decay: number } {
-  const night = pendulumCovariance(rig, cadence, signal);
-  const both = (measured: number, own: number | null) =>
-    own === null ? measured : measured === 0 ? 0 : 1 / Math.hypot(1 / measured, 1 / own);
+interface Night {
+  /** Near minus far and its u, rad. */
+  signal: number;
+  u: number;
+  periodS: number;
+  decayTimeS: number;
+}
+
+/** What a night tells: period and decay time as means, weighted by u⁻², with what was measured beforehand, which errs alone. */
+function ofNight(rig: RigDocument, cadence: Cadence, { signal, u, periodS, decayTimeS }: Night): ObservedU {
+  const { period_s: measuredPeriod, decayTime_s: measuredDecay } = rig.measured ?? {};
+  const ringing = told(rig, cadence, signal);
+  if (ringing === null) return { signal: u, period: measuredPeriod?.u ?? 0, decay: measuredDecay?.u ?? 0 };
+  const { covariance, withDifference } = ringing;
+  // Both fall where ω and γ rise.
+  const [byOmega, byGamma] = [-(periodS ** 2) / (2 * Math.PI), -(decayTimeS ** 2)];
+  const period = meanWith(measuredPeriod?.u ?? 0, Math.sqrt(at(covariance, 0, 0)) * -byOmega);
+  const decay = meanWith(measuredDecay?.u ?? 0, Math.sqrt(at(covariance, 1, 1)) * -byGamma);
+  const [ofPeriod, ofDecay] = [period.share * byOmega, decay.share * byGamma];
+  const coefficient = (product: number, us: number) => (us > 0 ? product / us : 0);
   return {
-    period: both(rig.measured?.period_s?.u ?? 0, night === null ? null : (Math.sqrt(at(night, 0, 0)) * periodS ** 2) / (2 * Math.PI)),
-    decay: both(rig.measured?.decayTime_s?.u ?? 0, night === null ? null : Math.sqrt(at(night, 1, 1)) * decayTimeS ** 2),
+    signal: u,
+    period: period.u,
+    decay: decay.u,
+    correlations: [
+      { of: ['reversal_rad', 'period_s'], r: coefficient(ofPeriod * withDifference[0], u * period.u) },
+      { of: ['reversal_rad', 'decayTime_s'], r: coefficient(ofDecay * withDifference[1], u * decay.u) },
+      { of: ['period_s', 'decayTime_s'], r: coefficient(ofPeriod * ofDecay * at(covariance, 0, 1), period.u * decay.u) },
+    ],
   };
 }
+
+/** u of the mean and the night's share in it. What was measured exactly counts alone. */
+const meanWith = (measured: number, own: number): { u: number; share: number } =>
+  measured === 0 ? { u: 0, share: 0 } : { u: 1 / Math.hypot(1 / measured, 1 / own), share: measured ** 2 / (measured ** 2 + own ** 2) };

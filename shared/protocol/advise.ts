@@ -1,5 +1,5 @@
 import { oscillatorOf } from '../physics/oscillator';
-import { inflation } from '../planning/night-noise';
+import { fittedRecording } from '../planning/fitted-recording';
 import type { RigDocument } from '../rig/document';
 import { adviseDocument } from './advise-document';
 import { shapedPeriodUnknown } from './advise-parts';
@@ -135,8 +135,8 @@ function noRingDown(dwells: readonly SideDwell[], rig: RigDocument): Finding[] {
   const oscillator = oscillatorOf(rig);
   const shortest = Math.min(...dwells.map((dwell) => dwell.durationS));
   if (oscillator === null || new Set(dwells.map(({ side }) => side)).size < 2 || !(shortest > 0)) return [];
-  const [alone, calibrated] = [false, true].map((known) => inflation(oscillator, shortest, { calibrated: known }));
-  const loss = Math.sqrt((alone as number) / (calibrated as number));
+  const { inflation, inflationAlone } = fittedRecording(oscillator, shortest);
+  const loss = Math.sqrt(inflationAlone() / inflation);
   if (!(loss > worthARingDown)) return [];
   return [
     {

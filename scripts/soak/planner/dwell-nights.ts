@@ -5,6 +5,7 @@ import { predictSignal } from '@/shared/protocol/predict';
 import type { RigDocument } from '@/shared/rig/document';
 import { differenceU, type Cadence } from '@/shared/planning/night-noise';
 import type { Alternative } from '@/shared/planning/strategies';
+import { predictU, together, type PredictedU } from '@/shared/planning/plan-uncertainty';
 import { abaDifference } from '@/shared/statistics/drift';
 import { offset, ringDownSegment } from '@/shared/statistics/ring-down';
 import { fitSeparable, type SeparableSegment } from '@/shared/statistics/variable-projection';
@@ -49,6 +50,8 @@ export interface Planned {
   dwells: number;
   /** Scatter of near minus far over the simulated nights by the planned uncertainty. */
   ratio: number;
+  /** The same of G, as near minus far and the torsion constant by the same night's period and decay give it. */
+  ratioOfG: number;
 }
 
 /** Whole periods from swing to swing, or one period of calm after waiting until the ringing has died to a hundredth. */
@@ -70,15 +73,30 @@ export function heldAgainstPlan(nights: number): Planned[] {
       const found = Array.from({ length: nights }, () =>
         difference(rig, { oscillator, cadence, signalRad, ringingRad: ringing[strategy] * signalRad, seed: (seed += 1) }),
       );
-      const scatter = Math.sqrt(found.reduce((sum, value) => sum + (value - signalRad) ** 2, 0) / nights);
-      return { rig: name, strategy, dwells: cadence.dwells, ratio: scatter / (differenceU(rig, cadence, signalRad) as number) };
+      const scatter = (of: (night: Found) => number) => Math.sqrt(found.reduce((sum, night) => sum + of(night) ** 2, 0) / nights);
+      return {
+        rig: name,
+        strategy,
+        dwells: cadence.dwells,
+        ratio: scatter(({ rad }) => rad - signalRad) / (differenceU(rig, cadence, signalRad) as number),
+        ratioOfG: scatter(({ rad, kappa }) => (rad * kappa) / (signalRad * oscillator.omega0 ** 2) - 1) / plannedOfG(rig, cadence),
+      };
     });
   });
 }
 
+/** Relative u of G by plan, of what the night alone tells: nothing was measured beforehand. */
+function plannedOfG(rig: RigDocument, cadence: Cadence): number {
+  const { period_s: period, decayTime_s: decay } = rig.measured ?? {};
+  if (period === undefined || decay === undefined) throw new Error('the planned rigs have a measured pendulum');
+  const measured = { period_s: { ...period, u: 1e3 * period.value }, decayTime_s: { ...decay, u: 1e3 * decay.value } };
+  const { bySource } = predictU({ ...rig, measured }, cadence) as PredictedU;
+  return Math.hypot(...['reversal_rad', 'period_s', 'decayTime_s', together].map((source) => bySource[source] ?? 0));
+}
+
 /** Of the ratios: how far the plan is off on the whole. */
-export const geometricMean = (planned: readonly Planned[]) =>
-  Math.exp(planned.reduce((sum, { ratio }) => sum + Math.log(ratio), 0) / planned.length);
+export const geometricMean = (ratios: readonly number[]) =>
+  Math.exp(ratios.reduce((sum, ratio) => sum + Math.log(ratio), 0) / ratios.length);
 
 interface Night {
   oscillator: Oscillator;
@@ -88,8 +106,15 @@ interface Night {
   seed: number;
 }
 
-/** Near minus far of one night, rad. */
-function difference(rig: RigDocument, night: Night): number {
+interface Found {
+  /** Near minus far. */
+  rad: number;
+  /** ω² + γ², rad2/s2: the torsion constant by the moment of inertia. */
+  kappa: number;
+}
+
+/** What one night tells. */
+function difference(rig: RigDocument, night: Night): Found {
   const { omegaD, gamma, periodS } = night.oscillator;
   const { dwells, dwellS, cycleS } = night.cadence;
   const [white, walk] = seededStreams(night.seed, 2) as [GaussianSource, GaussianSource];
@@ -115,11 +140,12 @@ function difference(rig: RigDocument, night: Night): number {
     return stretch(dwellS, (side * night.signalRad) / 2, -side * night.ringingRad);
   });
   const fit = fitSeparable([calibration, ...segments], [omegaD, gamma]);
-  return abaDifference(
+  const { value } = abaDifference(
     fit.segments.slice(1).map(({ coefficients }, k) => ({
       timeS: k * cycleS,
       side: k % 2 === 0 ? (1 as const) : (-1 as const),
       value: coefficients[offset] as number,
     })),
-  ).value;
+  );
+  return { rad: value, kappa: fit.alpha.reduce((sum, one) => sum + one * one, 0) };
 }

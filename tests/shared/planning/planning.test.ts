@@ -1,9 +1,10 @@
-import { differenceU, inflation, type Cadence } from '@/shared/planning/night-noise';
+import { fittedRecording } from '@/shared/planning/fitted-recording';
+import { differenceU, type Cadence } from '@/shared/planning/night-noise';
 import { excursionOf, peakExcursionRad } from '@/shared/planning/excursion';
 import { adviseNight } from '@/shared/planning/advise-night';
+import { oscillatorOf, type Oscillator } from '@/shared/physics/oscillator';
 import { predictU } from '@/shared/planning/plan-uncertainty';
 import { alternatives, cadenceOf } from '@/shared/planning/strategies';
-import { oscillatorOf, type Oscillator } from '@/shared/physics/oscillator';
 import type { Step } from '@/shared/protocol/document';
 import { planTimeline } from '@/shared/protocol/timeline';
 import { templateById } from '@/shared/protocol/templates';
@@ -13,7 +14,6 @@ import { relativeDifference } from '../../support/check-data';
 
 /** The planner against physics.md C4, F4, I1 and J1 to J3. */
 
-const oscillator = oscillatorOf(demoRigWide) as Oscillator;
 const withNoise = (readoutPerSecond: number, walk: number): RigDocument => ({
   ...demoRigWide,
   noise: { readout_rad: readoutPerSecond * Math.sqrt(10), walk_rad_per_sqrt_min: walk },
@@ -31,25 +31,46 @@ test.each([
   [1.25, 1.0697652, 1.5622456],
   [1.5, 1.103861, 1.1386665],
 ])('what fitting through the ringing costs in a dwell of %d periods (C4)', (periods, known, free) => {
-  const at = (calibrated: boolean) => inflation(oscillator, periods * 420, { calibrated });
-  expect(relativeDifference(at(true), known)).toBeLessThan(0.01);
-  expect(relativeDifference(at(false), free)).toBeLessThan(0.06);
+  const { inflation, inflationAlone } = fittedRecording(oscillatorOf(demoRigWide) as Oscillator, periods * 420);
+  expect(relativeDifference(inflation, known)).toBeLessThan(0.01);
+  expect(relativeDifference(inflationAlone(), free)).toBeLessThan(0.06);
 });
 
-test.each<[string, RigDocument, number, number, boolean]>([
-  ['teaching noise', teaching, 20, 4.394e-4, true],
-  ['enthusiast', enthusiast, 20, 1.437e-4, true],
-  ['teaching, swings in two moves', teaching, 230, 6.162e-4, false],
-])('%s: the noise of 12 hours of dwells of 900 s (J3, closed form)', (_name, rig, dead, expected, rings) => {
+const research: RigDocument = { ...demoRigWide, noise: { readout_rad: 1e-8, walk_rad_per_sqrt_min: 1e-8, temperature_K: 295.15 } };
+
+/** Dead time between dwells, s; u by generalised least squares of plain means and by the closed form of J1. */
+test.each<[string, RigDocument, number, boolean, { exact: number; closed: number }]>([
+  ['teaching noise', teaching, 20, true, { exact: 4.475e-4, closed: 4.394e-4 }],
+  ['enthusiast', enthusiast, 20, true, { exact: 1.464e-4, closed: 1.437e-4 }],
+  ['teaching, swings in two moves', teaching, 230, false, { exact: 6.283e-4, closed: 6.162e-4 }],
+  ['teaching, swings in three', teaching, 440, false, { exact: 8.08e-4, closed: 7.91e-4 }],
+  ['teaching, waiting to 1 %', teaching, 4920, false, { exact: 4.84e-3, closed: 4.461e-3 }],
+])('%s: the noise of 12 hours of dwells of 900 s (J3)', (_name, rig, dead, rings, { exact, closed }) => {
   const cycleS = 900 + dead;
   const cadence: Cadence = { dwells: Math.floor(43200 / cycleS), dwellS: 900, cycleS, calibrations: [perfect], rings };
-  expect(relativeDifference((differenceU(rig, cadence, 2 * theta) as number) / (2 * theta), expected)).toBeLessThan(0.03);
+  const found = (differenceU(rig, cadence, 2 * theta) as number) / (2 * theta);
+  // Windows of three and fitted centres lose 2 % to what could be had at best, and 4 % of so few dwells as the last has.
+  expect(found / exact).toBeGreaterThan(1);
+  expect(found / exact).toBeLessThan(cadence.dwells > 10 ? 1.03 : 1.045);
+  expect(found).toBeGreaterThan(closed);
 });
 
-test('thermal noise alone: 38 nrad of the mean of 900 s (I1, long means)', () => {
+test('a research rig is limited by its thermal noise: 5e-6 in 12 hours (J3)', () => {
+  const cadence: Cadence = { dwells: 46, dwellS: 900, cycleS: 920, calibrations: [perfect], rings: true };
+  const found = (differenceU(research, cadence, 2 * theta) as number) / (2 * theta);
+  // 4.961e-6 there with 38 nrad for the mean of 900 s; the fitted centre has 45 (I1).
+  const thermal = (mean: number) => (2 * mean) / Math.sqrt(46) / (2 * theta);
+  expect(relativeDifference(Math.sqrt(found ** 2 - thermal(4.541e-8) ** 2 + thermal(3.806e-8) ** 2), 4.961e-6)).toBeLessThan(0.03);
+});
+
+test.each([
+  [450, 6.602e-8],
+  [900, 4.541e-8],
+  [1800, 3.006e-8],
+])('thermal noise alone: the fitted centre of a dwell of %d s is open by %d rad (I1)', (dwellS, published) => {
   const rig: RigDocument = { ...demoRigWide, noise: { temperature_K: 295.15 } };
-  const pair: Cadence = { dwells: 2, dwellS: 900, cycleS: 900, calibrations: [], rings: false };
-  expect(relativeDifference((differenceU(rig, pair, 2 * theta) as number) / Math.SQRT2, 3.806453138e-8)).toBeLessThan(1e-6);
+  const pair: Cadence = { dwells: 2, dwellS, cycleS: dwellS, calibrations: [], rings: false };
+  expect(relativeDifference((differenceU(rig, pair, 2 * theta) as number) / Math.SQRT2, published)).toBeLessThan(2e-3);
 });
 
 const start = { utcMs: 0, angleDeg: 0 };
