@@ -120,6 +120,7 @@ soak('night', async (args) => {
   const count = args.includes('--second') ? SECOND : FIRST;
   const nights: NightFigures[] = [];
   for (let seed = 1; seed <= count; seed += 1) {
+    process.stderr.write(`night, seed ${seed}\n`);
     const night = await runNight(seed);
     nights.push(night);
     process.stderr.write(`night ${seed}: ${night.outcome}, ${night.steps} steps, ${night.violations.length} violations\n`);

@@ -1,5 +1,6 @@
 import { uniformInt } from 'pure-rand/distribution/uniformInt';
 import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
+import type { SeededKinds } from '../seeded/try-seeds';
 import { BoardBench } from './board-bench';
 import { judge } from './pin-oracle';
 
@@ -31,7 +32,14 @@ export function runSeededMoves(moves: number, seed: number): MovesMade {
     };
     const motion = bench.move({ to: from + way, speed, acceleration }, number % 5 === 4 ? { afterMs: upTo(1, 400), act } : undefined);
     made.steps += motion.edges.filter(({ pin, level }) => pin === 'step' && level).length;
-    made.wrong.push(...judge(motion).map((words) => `move ${number} by ${way} at ${speed}/s, ${acceleration}/s²: ${words}`));
+    made.wrong.push(...judge(motion).map((words) => `seed ${seed}, move ${number} by ${way} at ${speed}/s, ${acceleration}/s²: ${words}`));
   }
   return { ...made, boardS: bench.ms / 1000 };
 }
+
+const AT_ONCE = 100;
+
+/** A hundred moves at once: 1,000, or 20,000 as the second figure. */
+export const moveKinds: SeededKinds = {
+  moves: { attempt: (seed) => runSeededMoves(AT_ONCE, seed).wrong, first: 10, second: 200 },
+};

@@ -6,6 +6,7 @@ import { VirtualClock } from '@/server/engine/virtual-clock';
 import type { LinkEvent } from '@/server/interfaces/turntable-link';
 import { createLink } from '@/server/links/link-driver';
 import { createSimulatedController, type SimulatedController } from '@/server/links/simulated-controller';
+import type { SeededKinds } from '../seeded/try-seeds';
 
 /** One swing on the production link in virtual time, whose sign of life ends for a while at some instant, or comes late all the way, from a seed. */
 
@@ -127,3 +128,9 @@ export async function tryBusy(seed: number, busyMs = BUSY_MS): Promise<string[]>
   if (swing.events.some(({ kind }) => kind === 'lease-lapsed')) return [`${what}: the lease lapsed`];
   return ended?.kind === 'motion-ended' && ended.cause === 'done' ? [] : [`${what}: the swing ended as ${JSON.stringify(ended ?? null)}`];
 }
+
+/** 1,000 losses, or 20,000 as the second figure; and more than 24 h of busy swings, of 23 s each. */
+export const heartbeatKinds: SeededKinds = {
+  ...Object.fromEntries(losses.map((loss) => [loss, { attempt: (seed: number) => tryLoss(loss, seed), first: 250, second: 5_000 }])),
+  busy: { attempt: (seed) => tryBusy(seed), first: 3_800, second: 20_000 },
+};

@@ -15,7 +15,8 @@ import { openLiveStream } from '@/components/runs/live-stream';
 import { postOfRun, SafeActSender } from '@/components/runs/safe-acts';
 import { resumeRun } from '@/shared/contracts/going-on';
 import { getRun } from '@/shared/contracts/runs';
-import { FaultyNetwork, type PhoneFault } from './faulty-network';
+import type { SeededKinds } from '../seeded/try-seeds';
+import { FaultyNetwork, phoneFaults, type PhoneFault } from './faulty-network';
 import { LabSide } from './lab-side';
 import { VirtualTime } from './virtual-time';
 
@@ -198,3 +199,7 @@ export async function tryPhone(fault: PhoneFault, seed: number): Promise<string[
     Object.assign(globalThis, { fetch: realFetch, EventSource: realSource });
   }
 }
+
+export const phoneKinds: SeededKinds = Object.fromEntries(
+  phoneFaults.map((fault) => [fault, { attempt: (seed: number) => tryPhone(fault, seed), first: 25, second: 500 }]),
+);

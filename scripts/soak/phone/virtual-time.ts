@@ -1,4 +1,5 @@
 import type { Cancel, Clock } from '@/server/interfaces/clock';
+import { asOfThePhone } from './phone-time';
 
 interface Due {
   atMs: number;
@@ -6,7 +7,7 @@ interface Due {
 }
 
 /** The phone's clock is this far off the server's, ms: a minute and a half fast, as a phone without network may be (an estimate, no source). */
-const phoneAheadMs = 90_000;
+export const phoneAheadMs = 90_000;
 
 /** Time of both sides, which passes only when it is asked to; what is due at one instant happens in the order it was asked for. */
 export class VirtualTime implements Clock {
@@ -61,25 +62,8 @@ export class VirtualTime implements Clock {
   }
 
   /** The timers and the clock of the program are the phone's while `work` is done. */
-  async asOfThePhone<T>(work: () => Promise<T>): Promise<T> {
-    const { setTimeout: timer, clearTimeout: clear } = globalThis;
-    const dateNow = Date.now;
-    const cancels = new Map<number, Cancel>();
-    let made = 0;
-    globalThis.setTimeout = ((task: () => void, delayMs = 0) => {
-      made += 1;
-      cancels.set(made, this.onPhone(delayMs, task));
-      return made;
-    }) as unknown as typeof setTimeout;
-    globalThis.clearTimeout = ((id: number) => cancels.get(id)?.()) as typeof clearTimeout;
-    Date.now = () => this.nowMs + phoneAheadMs;
-    try {
-      return await work();
-    } finally {
-      globalThis.setTimeout = timer;
-      globalThis.clearTimeout = clear;
-      Date.now = dateNow;
-    }
+  asOfThePhone<T>(work: () => Promise<T>): Promise<T> {
+    return asOfThePhone({ utcMs: () => this.nowMs + phoneAheadMs, after: this.onPhone }, work);
   }
 }
 

@@ -1,6 +1,8 @@
 import { verifyChain } from '@/shared/archive/chain';
 import { sha256Hex } from '@/server/evaluation/sha256';
-import type { Night } from './night';
+import type { SeededKinds } from '../seeded/try-seeds';
+import { runNight, type Night } from './night';
+import type { Witness } from './world';
 
 /** What must hold on every night; each tells what is wrong, or nothing. They look from outside: at the controller, the database, what people were told. */
 type Check = (night: Night) => string | null;
@@ -40,10 +42,54 @@ const nothingLost: Check = ({ world: { store, witness } }) => {
   return null;
 };
 
+/** A tap counts for 5 s by the server's clock, which may have been set since. */
+const isLate = ({ ageMs, setMs }: Witness['resumesFromAfar'][0]) => ageMs > 5_000 + setMs;
+
+/** When people resumed, from near or far, ms. */
+const resumesOf = ({ resumes, resumesFromAfar }: Witness): number[] =>
+  [...resumes, ...resumesFromAfar.filter((one) => one.acted && !isLate(one)).map(({ atMs }) => atMs)].sort((a, b) => a - b);
+
+const timesIn = ({ store }: Night['world'], kind: string, by: string) =>
+  store.events.filter((event) => event.kind === kind && event.data['by'] === by).length;
+
+/** A resume that comes later than 5 s after its tap does nothing; one that comes twice counts once. */
+const noLateResume: Check = ({ world }) => {
+  const { resumesFromAfar } = world.witness;
+  for (const { by, atMs, ageMs } of resumesFromAfar) {
+    const inTime = resumesFromAfar.some((one) => one.by === by && !isLate(one));
+    const times = timesIn(world, 'resumed', by);
+    if (times > Number(inTime)) return `"${by}" resumed ${times} times, at ${atMs.toFixed(0)} ms it was ${ageMs.toFixed(0)} ms old`;
+  }
+  return null;
+};
+
+/** A stop from afar that was answered is in the log once, and the run is stopped once, however often it was sent; no act from afar is there twice. */
+const acknowledgedOnce: Check = ({ world }) => {
+  const { acknowledged } = world.witness;
+  for (const { act, by } of acknowledged) {
+    const times = timesIn(world, `${act}-requested`, by);
+    if (times > 1 || (act === 'stop' && times === 0)) return `the ${act} of "${by}", which was answered, is in the log ${times} times`;
+  }
+  const stopped = world.store.events.filter(({ kind }) => kind === 'stopped').length;
+  return acknowledged.some(({ act }) => act === 'stop') && stopped !== 1 ? `the run was stopped ${stopped} times` : null;
+};
+
+/** No page says "Stopped" before the controller has confirmed that the table stands; and from then on it stands. */
+const saidWhenConfirmed: Check = ({ world: { store, witness }, stoodDeg }) => {
+  for (const { atMs, angleDeg } of witness.stoppedSaid) {
+    if (!store.events.some(({ kind, data }) => kind === 'stopped' && data['confirmed'] === true))
+      return `the page said at ${atMs.toFixed(0)} ms that it stopped, which nobody confirmed`;
+    const began = witness.began.find((motion) => motion.atMs > atMs);
+    if (angleDeg !== stoodDeg[0] || began !== undefined)
+      return `the page said at ${atMs.toFixed(0)} ms that it stopped, at ${angleDeg} deg, and it came to ${stoodDeg[0]} deg`;
+  }
+  return null;
+};
+
 /** No order of motion goes out after a stop that was answered, nor after a hold before somebody resumes. */
 const restsAfterHalt: Check = ({ world: { witness } }) => {
   for (const { kind, atMs } of witness.halts) {
-    const untilMs = kind === 'stop' ? Infinity : (witness.resumes.find((resumeMs) => resumeMs >= atMs) ?? Infinity);
+    const untilMs = kind === 'stop' ? Infinity : (resumesOf(witness).find((resumeMs) => resumeMs >= atMs) ?? Infinity);
     const late = witness.ordered.find((order) => order.atMs > atMs + ON_THE_LINE_MS && order.atMs < untilMs);
     if (late !== undefined)
       return `the motion ${late.tag} was ordered at ${late.atMs.toFixed(0)} ms, after the ${kind} of ${atMs.toFixed(0)} ms`;
@@ -51,7 +97,7 @@ const restsAfterHalt: Check = ({ world: { witness } }) => {
   return null;
 };
 
-/** After a restart of the controller, an opened interlock or a lost supply nothing moves before a person resumes. */
+/** After a restart of the controller, an opened interlock or a lost supply nothing moves before a person resumes who was at the rig. */
 const restsAfterHazard: Check = ({ world: { witness } }) => {
   for (const { kind, atMs } of witness.hazards) {
     const untilMs = witness.resumes.find((resumeMs) => resumeMs >= atMs) ?? Infinity;
@@ -90,6 +136,9 @@ const checks: Readonly<Record<string, Check>> = {
   nothingLost,
   restsAfterHalt,
   restsAfterHazard,
+  noLateResume,
+  acknowledgedOnce,
+  saidWhenConfirmed,
   comesToAnEnd,
 };
 
@@ -100,3 +149,12 @@ export function wrongWith(night: Night): string[] {
     return wrong === null ? [] : [`seed ${night.seed} (${night.policy}; ${night.deeds.join('; ')}), ${name}: ${wrong}`];
   });
 }
+
+export const nightKinds = {
+  night: { attempt: async (seed: number) => wrongWith(await runNight(seed)), first: 20_000, second: 1_000_000 },
+  'night without a phone': {
+    attempt: async (seed: number) => wrongWith(await runNight(seed, { withPhone: false })),
+    first: 1_000,
+    second: 10_000,
+  },
+} satisfies SeededKinds;

@@ -4,14 +4,18 @@ import type { RunStart } from '@/shared/archive/run-records';
 import type { InterruptionPolicy, ProtocolDocument } from '@/shared/protocol/document';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import { sha256Hex } from '@/server/evaluation/sha256';
+import { asOfThePhone, type PhoneTime } from '../phone/phone-time';
+import { phoneAheadMs } from '../phone/virtual-time';
+import { NightPhone } from './night-phone';
 import { World } from './world';
 
-/** A night of a few minutes with everything that can go wrong, from a seed: line, controller, process, database, clock and people. */
+/** A night of a few minutes with everything that can go wrong, from a seed: line, controller, process, database, sensor, clock, people and a phone. */
 
 export const startUtcMs = Date.UTC(2026, 2, 1, 22);
 const TROUBLE_MS = 240_000;
 /** The longest that is left of a run, and of faults that were begun, when all is well again. */
 const HEALING_MS = 330_000;
+const TOLD_MS = 10_000;
 const restful = ['held', 'stopped', 'finished', 'failed'];
 const MOST_DEEDS = 8;
 const policies: InterruptionPolicy[] = ['hold', 'resume', 'stop'];
@@ -228,31 +232,23 @@ export const startOf = (protocol: ProtocolDocument): RunStart => ({
   simulated: null,
 });
 
-export async function runNight(seed: number): Promise<Night> {
+/** `withPhone`: somebody holds, stops and resumes from afar besides. The other faults of a seed are the same with and without. */
+export async function runNight(seed: number, { withPhone = true } = {}): Promise<Night> {
   const random = xoroshiro128plus(seed * 104_729 + 11);
   const between = (least: number, greatest: number) => uniformInt(random, least, greatest);
   const dice: Dice = { between, upTo: (greatest) => between(0, greatest) };
   const policy = policies[seed % 3] as InterruptionPolicy;
   const plain = protocolOf(policy, dice);
   const world = new World(startOf(isAttended(seed) ? attend(plain, dice) : plain), { seed, startUtcMs });
+  const phone = withPhone ? new NightPhone(world, seed) : null;
   const done: string[] = [];
-  await world.begin();
-  if (isAttended(seed))
-    for (let count = between(0, 6); count > 0; count -= 1) world.clock.after(between(0, TROUBLE_MS), () => world.confirm());
-  for (let count = between(1, MOST_DEEDS); count > 0; count -= 1) {
-    const name = between(0, 19) === 0 ? 'stop' : (drawn[between(0, drawn.length - 1)] as string);
-    const [atMs, own] = [between(0, TROUBLE_MS), xoroshiro128plus(between(0, 2 ** 30))];
-    const draw = (least: number, greatest: number) => uniformInt(own, least, greatest);
-    world.clock.after(atMs, () => {
-      done.push(`${world.nowMs.toFixed(0)} ms: ${name} ${deeds[name]?.(world, { between: draw, upTo: (greatest) => draw(0, greatest) })}`);
-    });
-  }
-  await world.clock.advance(TROUBLE_MS, () => world.alive && world.done);
-  world.heal();
-  await world.clock.advance(HEALING_MS, () => world.alive && restful.includes(world.state));
-  await world.comeBack();
-  await world.clock.advance(5_000);
-  const healed = world.state;
+  const tell = (words: string) => void done.push(`${world.nowMs.toFixed(0)} ms: ${words}`);
+  const healed = await asOfThePhone(phoneTime(world), async () => {
+    await world.begin();
+    draws(world, { dice, attended: isAttended(seed), tell });
+    phone?.begin(TROUBLE_MS, tell);
+    return heals(world, phone);
+  });
   world.halt('stop');
   await world.clock.advance(120_000, () => world.done);
   await world.clock.advance(3_000);
@@ -262,4 +258,34 @@ export async function runNight(seed: number): Promise<Night> {
   const { store, witness } = world;
   const left = { events: store.events, rows: [...store.rows.values()], began: witness.began };
   return { seed, policy, deeds: done, world, healed, stoodDeg: [stood, world.angleDeg()], hash: sha256Hex(JSON.stringify(left)) };
+}
+
+const phoneTime = ({ clock }: World): PhoneTime => ({
+  utcMs: () => clock.utcMs() + phoneAheadMs,
+  after: (ms, task) => clock.after(ms, task),
+});
+
+/** Draws what will be done to the night. */
+function draws(world: World, { dice, attended, tell }: { dice: Dice; attended: boolean; tell(words: string): void }): void {
+  const { between } = dice;
+  if (attended) for (let count = between(0, 6); count > 0; count -= 1) world.clock.after(between(0, TROUBLE_MS), () => world.confirm());
+  for (let count = between(1, MOST_DEEDS); count > 0; count -= 1) {
+    const name = between(0, 19) === 0 ? 'stop' : (drawn[between(0, drawn.length - 1)] as string);
+    const [atMs, own] = [between(0, TROUBLE_MS), xoroshiro128plus(between(0, 2 ** 30))];
+    const draw = (least: number, greatest: number) => uniformInt(own, least, greatest);
+    world.clock.after(atMs, () => tell(`${name} ${deeds[name]?.(world, { between: draw, upTo: (greatest) => draw(0, greatest) }) ?? ''}`));
+  }
+}
+
+/** The time of trouble, and after it; the state of the run then. */
+async function heals(world: World, phone: NightPhone | null): Promise<string> {
+  await world.clock.advance(TROUBLE_MS, () => world.alive && world.done);
+  // Of a run that is over a page is told for a while yet.
+  if (phone !== null) await world.clock.advance(TOLD_MS);
+  world.heal();
+  phone?.end();
+  await world.clock.advance(HEALING_MS, () => world.alive && restful.includes(world.state));
+  await world.comeBack();
+  await world.clock.advance(5_000);
+  return world.state;
 }

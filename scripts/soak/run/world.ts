@@ -1,6 +1,5 @@
 import { decodeLine } from '@/firmware-protocol/codec';
-import { type ChainHead, emptyChain } from '@/shared/archive/chain';
-import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
+import type { RunStart } from '@/shared/archive/run-records';
 import { motionOf } from '@/shared/protocol/durations';
 import { MemoryJournals } from '@/server/engine/memory-journal';
 import { RigSupervisor } from '@/server/engine/rig-supervisor';
@@ -10,67 +9,18 @@ import { SteadyClock } from '@/server/engine/steady-clock';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import type { Clock } from '@/server/interfaces/clock';
-import { type RunStore, type RunWrite, StaleRunError, type StoredRun } from '@/server/interfaces/run-store';
 import type { TurntableLink } from '@/server/interfaces/turntable-link';
 import { isPassing } from '@/server/store/failures';
 import { createLink } from '@/server/links/link-driver';
 import { createSimulatedController, type SimulatedController } from '@/server/links/simulated-controller';
 import { Room } from './room';
+import { SimulatedStore } from './simulated-store';
 
 /** The engine, link and codec of a server with a turntable, a database and a disk around them, which can all fail. */
 
 const settle = async () => {
   for (let turn = 0; turn < 12; turn += 1) await null;
 };
-
-const databaseAway = () => Object.assign(new Error('the connection broke before the answer'), { code: 'ECONNRESET' });
-
-/** A database in memory: what is not plain data is lost in it, and it can be away. */
-export class SimulatedStore implements RunStore {
-  readonly events: ChainedEvent[] = [];
-  readonly rows = new Map<number, StepRow>();
-  away = false;
-  /** Asked at each commit; `answer-lost`: stored, and the answer never comes. */
-  onCommit: (when: 'before' | 'after') => void = () => undefined;
-  loseAnswers = 0;
-  private stored: string | null = null;
-
-  constructor(private readonly start: RunStart) {}
-
-  async load(): Promise<StoredRun | null> {
-    if (this.away) throw databaseAway();
-    const kept = this.stored === null ? { snapshot: null, chartVersion: 0 } : (JSON.parse(this.stored) as object);
-    return { start: this.start, ...(kept as { snapshot: unknown; chartVersion: number }), chain: this.head() };
-  }
-
-  async unfinished(): Promise<StoredRun[]> {
-    const run = await this.load();
-    return run === null || this.stored === null ? [] : [run];
-  }
-
-  async commit(write: RunWrite): Promise<void> {
-    this.onCommit('before');
-    if (this.away) throw databaseAway();
-    if (this.head().seq !== write.expectedSeq) throw new StaleRunError(`the chain ends at ${this.head().seq}`);
-    const { events, steps } = JSON.parse(JSON.stringify({ events: write.events, steps: write.steps })) as RunWrite;
-    this.events.push(...events);
-    for (const row of steps) this.rows.set(row.seq, row);
-    this.stored = JSON.stringify({ snapshot: write.snapshot, chartVersion: write.chartVersion });
-    this.onCommit('after');
-    if (this.loseAnswers === 0) return;
-    this.loseAnswers -= 1;
-    throw databaseAway();
-  }
-
-  /** Of the run, as stored. */
-  state(): string | null {
-    return this.stored === null ? null : (JSON.parse(this.stored) as { snapshot: { state: string } }).snapshot.state;
-  }
-
-  private head(): ChainHead {
-    return this.events.at(-1) ?? emptyChain;
-  }
-}
 
 /** The clocks of the server's machine: the wall clock may be set, and run at another rate than durations are measured by. */
 class SteppingClock implements Clock {
@@ -93,7 +43,14 @@ export interface Witness {
   ordered: { tag: string; atMs: number }[];
   /** Holds and stops that people were answered. */
   halts: { kind: 'hold' | 'stop'; atMs: number }[];
+  /** Resumes and confirmed prompts of people who were at the rig and armed it again. */
   resumes: number[];
+  /** Resumes that came to a server over a network; `acted`: it let the run decide; `setMs`: by how much its clock was set since the tap. */
+  resumesFromAfar: { by: string; atMs: number; ageMs: number; setMs: number; acted: boolean }[];
+  /** Holds and stops from afar that a server acted on and answered. */
+  acknowledged: { act: 'hold' | 'stop'; by: string }[];
+  /** A page said that the controller had confirmed the stop, and where the table stood then. */
+  stoppedSaid: { atMs: number; angleDeg: number }[];
   hazards: { kind: string; atMs: number }[];
   /** Events of the log that somebody was told. */
   told: Map<number, string>;
@@ -106,13 +63,19 @@ export class World {
   readonly store: SimulatedStore;
   readonly controller: SimulatedController;
   readonly room: Room;
-  readonly witness: Witness = { began: [], ordered: [], halts: [], resumes: [], hazards: [], told: new Map(), errors: [] };
+  readonly witness: Witness = {
+    ...{ began: [], ordered: [], halts: [], hazards: [], told: new Map(), errors: [] },
+    ...{ resumes: [], resumesFromAfar: [], acknowledged: [], stoppedSaid: [] },
+  };
   private readonly journals = new MemoryJournals();
   private arm: Arm | null;
   private link: TurntableLink | null = null;
   private supervisor: RigSupervisor | null = null;
   private last: RunDriver | null = null;
-  private epoch = 0;
+  /** Driver of the present process; null while it has not taken the run up. */
+  present: RunDriver | null = null;
+  /** Number of the process, which is its epoch too. */
+  process = 0;
   /** State of the run as the next process found it, which had nothing to take up. */
   private endedBefore: string | null = null;
   /** Sends of the present process, counted down to its death; below 0: it lives. */
@@ -175,6 +138,7 @@ export class World {
     this.supervisor?.close();
     void this.link?.close();
     this.supervisor = null;
+    this.present = null;
     this.link = null;
     this.dieAtSend = -1;
   }
@@ -211,8 +175,8 @@ export class World {
     if (!this.alive || this.hadEnded) return;
     const answer = this.driver[kind]('Ben');
     if (!answer.ok) return;
-    const process = this.epoch;
-    const answered = () => this.epoch === process && this.alive && this.witness.halts.push({ kind, atMs: this.nowMs });
+    const { process } = this;
+    const answered = () => this.process === process && this.alive && this.witness.halts.push({ kind, atMs: this.nowMs });
     if (answer.kept === undefined) answered();
     else void answer.kept.then((result) => result !== null && answered());
   }
@@ -253,13 +217,13 @@ export class World {
   }
 
   private openServer(): RigSupervisor {
-    this.epoch += 1;
+    this.process += 1;
     const clock = new SteadyClock(this.machineClock, () => this.supervisor?.drives(this.start.rigId) ?? false);
     const link = createLink({
       factory: this.controller.factory,
       clock,
       rig: motionOf(this.start.rig),
-      epoch: this.epoch,
+      epoch: this.process,
     });
     this.link = link;
     const send = link.send.bind(link);
@@ -289,6 +253,7 @@ export class World {
 
   private follow(driver: RunDriver): void {
     this.last = driver;
+    this.present = driver;
     driver.onChange(({ events }) => {
       for (const { seq, hash } of events) this.witness.told.set(seq, hash);
     });
