@@ -1,3 +1,4 @@
+import { decodeLine } from '@/firmware-protocol/codec';
 import type { LinkEvent } from '@/server/interfaces/turntable-link';
 import { tagOf } from '@/server/links/command-book';
 import { crystal, soakRig, startUtcMs, type Night } from './night';
@@ -33,6 +34,46 @@ const atMostOnce: Check = (night) => {
   const strange = tags.find((tag) => !MOTIONS.some((id) => tagOf(id) === tag));
   if (strange !== undefined) return `a motion ${strange} began that nobody of this driver ordered`;
   return twice === undefined ? null : `the motion ${twice} began twice`;
+};
+
+/** Each request is carried out at most once, whatever was repeated: what is done a second time is answered with another time of receipt. */
+const eachOnce: Check = ({ arrived, replies }) => {
+  const words = new Map(arrived.map(({ request }) => [keyOf(request), request.order.word]));
+  const receipts = new Map<string, number>();
+  for (const { reply } of replies) {
+    const { body, receivedUs } = reply;
+    const word = words.get(keyOf(reply)) ?? '';
+    // Greetings have numbers of their own, stops may be carried out again, and these refusals are of what was not carried out (SPEC 3.7, 9.4).
+    if (['', 'hello', 'ident', 'hold', 'stop', 'off'].includes(word)) continue;
+    if (body.word === 'no' && ['session', 'epoch', 'old', 'reused'].includes(body.code)) continue;
+    if ((receipts.get(keyOf(reply)) ?? receivedUs) !== receivedUs) return `the ${word} ${keyOf(reply)} was carried out twice`;
+    receipts.set(keyOf(reply), receivedUs);
+  }
+  return null;
+};
+
+const keyOf = ({ session, number }: { session: string; number: number }) => `${session} ${number}`;
+
+/** What was spoilt on its way is read by nobody, at either end. */
+const nothingSpoiltIsRead: Check = ({ line: { written, arrived } }) => {
+  const read = arrived.find((line) => !written.has(line) && ['request', 'unusable', 'reply', 'event'].includes(decodeLine(line).kind));
+  return read === undefined ? null : `"${read}" was read, and nobody wrote it`;
+};
+
+/** No motion is called done that the controller has not acknowledged and ended. */
+const doneWhenAcknowledged: Check = (night) => {
+  for (const { event, atMs } of night.told) {
+    if (event.kind !== 'homed' && !(event.kind === 'motion-ended' && event.cause === 'done')) continue;
+    const tag = tagOf(event.commandId);
+    const order = night.arrived.find(({ request }) => 'tag' in request.order && request.order.tag === tag);
+    const acknowledged = night.replies.some(({ reply, atMs: repliedMs }) => order && isAnswer(reply, order.request) && repliedMs <= atMs);
+    const ended = night.did.some(
+      ({ event: { what }, atMs: didMs }) => what.word === 'ended' && what.tag === tag && what.cause === 'done' && didMs <= atMs,
+    );
+    if (!acknowledged || !ended)
+      return `"${event.commandId}" was called done at ${atMs} ms, and the controller had not ${acknowledged ? 'ended' : 'acknowledged'} it`;
+  }
+  return null;
 };
 
 /** The controller knows its count: steps that it lost unseen are not its doing. */
@@ -151,6 +192,9 @@ const toldAsItWas: Check = (night, { restarts }) => {
 
 export const checks: Readonly<Record<string, Check>> = {
   atMostOnce,
+  eachOnce,
+  nothingSpoiltIsRead,
+  doneWhenAcknowledged,
   insideLimits,
   allowedToMove,
   nothingAfterStop,

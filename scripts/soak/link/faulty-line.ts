@@ -2,12 +2,15 @@ import { uniformInt } from 'pure-rand/distribution/uniformInt';
 import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
 import type { ByteLine, ByteLineFactory } from '@/server/interfaces/byte-line';
 import type { Clock } from '@/server/interfaces/clock';
+import { Refusals } from './refusals';
 
 /** What may happen to a line of bytes on its way; `mixed` is any of those before it. */
 export const lineFaults = ['drop', 'double', 'reorder', 'flip', 'truncate', 'delay', 'noise', 'merge', 'mixed'] as const;
 /** What hits only what the controller says: its replies, its events, bytes that another program reads away, and another device that talks in between. */
 const inboundFaults = ['reply-lost', 'event-lost', 'stolen', 'talker'] as const;
-export type LineFault = (typeof lineFaults)[number] | (typeof inboundFaults)[number];
+/** What hits only what the driver asks. */
+const outboundFaults = ['refused'] as const;
+export type LineFault = (typeof lineFaults)[number] | (typeof inboundFaults)[number] | (typeof outboundFaults)[number];
 
 export interface FaultyLine {
   factory: ByteLineFactory;
@@ -15,6 +18,10 @@ export interface FaultyLine {
   heal(): void;
   /** Another program on the port writes a line, line feed included. */
   interject(line: string): void;
+  /** Lines as somebody wrote them, at either end. */
+  readonly written: ReadonlySet<string>;
+  /** Lines as they came out, at either end. */
+  readonly arrived: readonly string[];
 }
 
 /** Lines of devices that speak something else (made up). */
@@ -50,13 +57,16 @@ class Held {
 
 interface Way {
   clock: Clock;
+  refusals: Refusals;
+  noted(line: string): string;
   upTo(greatest: number): number;
   deliver(line: string): void;
   held: Held;
 }
 
-function spoilers({ clock, upTo, deliver, held }: Way): Record<Exclude<LineFault, 'mixed'>, (line: string) => void> {
+function spoilers({ clock, refusals, noted, upTo, deliver, held }: Way): Record<Exclude<LineFault, 'mixed'>, (line: string) => void> {
   return {
+    refused: (line) => deliver(noted(refusals.askedInstead(line))),
     'reply-lost': (line) => (line.startsWith('r ') ? undefined : deliver(line)),
     'event-lost': (line) => (line.startsWith('e ') ? undefined : deliver(line)),
     stolen: (line) => {
@@ -94,19 +104,27 @@ function spoilers({ clock, upTo, deliver, held }: Way): Record<Exclude<LineFault
   };
 }
 
-/** A line that spoils a share of what passes, in both directions or, for some faults, on the way in. */
+/** A line that spoils a share of what passes, in both directions or, for some faults, in one. */
 export function faultyLine(inner: ByteLineFactory, clock: Clock, { fault, seed, share }: FaultOptions): FaultyLine {
   const random = xoroshiro128plus(seed);
   const upTo = (greatest: number) => uniformInt(random, 0, greatest);
   const mixable = lineFaults.filter((kind) => kind !== 'mixed');
+  const refusals = new Refusals(upTo);
+  const written = new Set<string>();
+  const arrived: string[] = [];
   let healthy = false;
   let current: ByteLine | null = null;
+  const noted = (line: string) => {
+    written.add(line);
+    return line;
+  };
 
   /** A way for lines, in one direction. */
   function way(deliver: (line: string) => void, isInbound: boolean): (line: string) => void {
     const held = new Held(deliver);
-    const spoil = spoilers({ clock, upTo, deliver, held });
-    const spares = !isInbound && inboundFaults.some((kind) => kind === fault);
+    const spoil = spoilers({ clock, refusals, noted, upTo, deliver, held });
+    const spared: readonly string[] = isInbound ? outboundFaults : inboundFaults;
+    const spares = spared.includes(fault);
     return (line) => {
       const hit = !healthy && !spares && line.length > 0 && upTo(9_999) < share * 10_000;
       if (hit) return spoil[fault === 'mixed' ? (mixable[upTo(mixable.length - 1)] as Exclude<LineFault, 'mixed'>) : fault](line);
@@ -115,13 +133,23 @@ export function faultyLine(inner: ByteLineFactory, clock: Clock, { fault, seed, 
     };
   }
 
+  const arriving = (deliver: (line: string) => void) => (line: string) => {
+    arrived.push(line);
+    deliver(line);
+  };
+
   const factory: ByteLineFactory = {
     ...inner,
     open: async ({ onLine, onClosed }) => {
-      const line = (current = await inner.open({ onLine: way(onLine, true), onClosed }));
-      const outbound = way((text) => line.write(`${text}\n`), false);
-      return { write: (bytes) => outbound(bytes.slice(0, -1)), close: () => line.close() };
+      const inbound = way(arriving(onLine), true);
+      const line = (current = await inner.open({ onLine: (text) => inbound(noted(refusals.answeredInstead(text))), onClosed }));
+      const outbound = way(
+        arriving((text) => line.write(`${text}\n`)),
+        false,
+      );
+      return { write: (bytes) => outbound(noted(bytes.slice(0, -1))), close: () => line.close() };
     },
   };
-  return { factory, heal: () => void (healthy = true), interject: (line) => current?.write(line) };
+  const interject = (line: string) => current?.write(line);
+  return { factory, heal: () => void (healthy = true), interject, written, arrived };
 }

@@ -6,7 +6,7 @@ import type { LinkCommand, LinkEvent, TurntableLink } from '@/server/interfaces/
 import { createLink } from '@/server/links/link-driver';
 import { createSimulatedController, type SimulatedController } from '@/server/links/simulated-controller';
 import type { RigMotion } from '@/shared/rig/document';
-import { faultyLine } from './faulty-line';
+import { faultyLine, type FaultyLine } from './faulty-line';
 import type { Situation } from './situations';
 
 /** A quick turntable whose limits are as close to what is ordered as can be, so that nothing passes them unseen. */
@@ -39,6 +39,8 @@ export interface Night {
   hazards: At<{ kind: 'interlock' | 'supply' | 'reset' }>[];
   /** Stretches in which an input forbade motion, ms. */
   forbidden: { kind: 'interlock' | 'supply'; fromMs: number; toMs: number }[];
+  /** Lines as somebody wrote them, and as they came out at the other end. */
+  line: Pick<FaultyLine, 'written' | 'arrived'>;
   slippedSteps: number;
   uptimeS: number;
   condition: string;
@@ -92,6 +94,7 @@ export async function runNight(situation: Situation, seed: number): Promise<Nigh
     },
   });
   const line = faultyLine(controller.factory, clock, { fault: situation.line ?? 'drop', seed, share: situation.share });
+  night.line = { written: line.written, arrived: line.arrived };
   const link = createLink({ factory: line.factory, clock, rig: soakRig, epoch: 7 });
   const lease = { mayRenew: true };
   link.subscribe((event) => night.told.push({ event, atMs: nowMs() }));
@@ -117,7 +120,7 @@ export async function runNight(situation: Situation, seed: number): Promise<Nigh
 
 function emptyNight(uptimeS: number): Night {
   const lists = { issued: [], arrived: [], replies: [], did: [], told: [], samples: [], hazards: [], forbidden: [] };
-  return { ...lists, slippedSteps: 0, uptimeS, condition: '' };
+  return { ...lists, line: { written: new Set(), arrived: [] }, slippedSteps: 0, uptimeS, condition: '' };
 }
 
 function sample({ clock, controller, night }: Pick<Scene, 'clock' | 'controller' | 'night'>): void {

@@ -102,8 +102,12 @@ function strangeHost({ at, upTo, interject }: Scene): void {
     });
 }
 
+/** The nine kinds of fault of a serial line, each by itself; `refused`: the controller answers that it will not. */
+export const serialFaults = ['drop', 'double', 'reorder', 'truncate', 'flip', 'delay', 'noise', 'stuck', 'refused'] as const;
+
 export const situations: readonly Situation[] = [
   ...lineFaults.map((line) => ({ name: line, line, share: 0.15 })),
+  { name: 'refused', line: 'refused', share: 0.15 },
   { name: 'reply-lost', line: 'reply-lost', share: 0.6 },
   { name: 'event-lost', line: 'event-lost', share: 0.6 },
   { name: 'stolen', line: 'stolen', share: 0.3 },
