@@ -3,27 +3,22 @@ import { View } from 'react-native';
 import { useLab, useLabMutation } from '@/components/api';
 import { Body, Field, Label, ReasonSheet } from '@/components/ui';
 import { makeExclusion, withdrawExclusion, type ExclusionView } from '@/shared/contracts/exclusions';
-import { formatDuration } from '@/shared/lib/format-duration';
-import { formatClock, zoneName } from '@/shared/lib/format-time';
-import { lengthS, partOf, wholeOf, type Stretch } from './stretch';
-
-/** Clock times of a stretch and how long it is. */
-export function stretchWords(stretch: Stretch, timeZone: string): string {
-  const clock = (utcMs: number) => formatClock(utcMs, { timeZone, precision: 'seconds' });
-  return `${clock(stretch.startUtcMs)} to ${clock(stretch.endUtcMs)}, ${formatDuration(lengthS(stretch))}`;
-}
+import { zoneName } from '@/shared/lib/format-time';
+import { partOf, stretchWords, wholeOf, type Stretch } from './stretch';
 
 interface ExcludeSheetProps {
   runId: string;
-  /** The step whose samples are to be excluded, or a part of them. */
+  /** The stretch whose samples are to be excluded, or a part of them. */
   step: Stretch;
+  /** What the stretch is, as in `the beginning of the step`. */
+  of?: string;
   title: string;
   onClose: () => void;
   onDone: () => void;
 }
 
-/** Excludes a step or a part of it: from when to when, and why. */
-export function ExcludeSheet({ runId, step, title, onClose, onDone }: ExcludeSheetProps) {
+/** Excludes a step, or whatever was marked, or a part of it: from when to when, and why. */
+export function ExcludeSheet({ runId, step, of = 'the step', title, onClose, onDone }: ExcludeSheetProps) {
   const { timeZone } = useLab();
   const [typed, setTyped] = useState(() => wholeOf(step));
   const exclude = useLabMutation(makeExclusion, () => {
@@ -73,8 +68,8 @@ export function ExcludeSheet({ runId, step, title, onClose, onDone }: ExcludeShe
       </View>
       <Label>
         {stretch === null
-          ? 'Seconds after the beginning of the step.'
-          : `Seconds after the beginning of the step: ${stretchWords(stretch, timeZone)}, ${zoneName(timeZone)}.`}
+          ? `Seconds after the beginning of ${of}.`
+          : `Seconds after the beginning of ${of}: ${stretchWords(stretch, timeZone)}, ${zoneName(timeZone)}.`}
       </Label>
     </ReasonSheet>
   );

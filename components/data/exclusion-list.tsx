@@ -4,7 +4,8 @@ import { useLab, useLabQuery, useMay, wordsOf } from '@/components/api';
 import { Body, Button, Icon, Label, Num, ProblemNotice } from '@/components/ui';
 import { listExclusions, type ExclusionView } from '@/shared/contracts/exclusions';
 import { formatDayAndClock } from '@/shared/lib/format-time';
-import { stretchWords, WithdrawSheet } from './exclude-sheet';
+import { WithdrawSheet } from './exclude-sheet';
+import { stretchWords } from './stretch';
 
 const none: readonly ExclusionView[] = [];
 

@@ -22,15 +22,6 @@ beforeAll(async () => {
   await lab().pass(60);
 }, 120_000);
 
-/** In each theme, as if it had been chosen on this device. */
-async function shootsThemes(hand: Hand, name: string, there: () => Promise<void>): Promise<void> {
-  for (const theme of ['light', 'red', 'dark']) {
-    await hand.page.evaluate((chosen) => localStorage.setItem('evenfall.theme', chosen), theme);
-    await there();
-    await hand.shoots(`${name}-${theme}`);
-  }
-}
-
 /** Somebody looks for a while: the lab of a test looks for work twice a minute, and a look counts for 20 s. */
 async function looked(): Promise<void> {
   for (let turn = 0; turn < 4; turn += 1) {
@@ -64,7 +55,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.goes(rig, 'cameras');
     await looked();
     await hand.reads('camera-taken', /^Taken \d\d:\d\d:\d\d/);
-    await shootsThemes(hand, 'cameras', async () => {
+    await hand.shootsThemes('cameras', async () => {
       await hand.goes(rig, 'camera-picture');
       await decoded(hand, 'camera-picture');
       await hand.at('cameras').scrollIntoViewIfNeeded();
@@ -107,7 +98,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.goes(`/runs/${runningId}`, 'run-screen');
     await looked();
     await hand.reads('run-picture-taken', /^Taken \d\d:\d\d:\d\d, \d+ s ago/);
-    await shootsThemes(hand, 'run-camera', async () => {
+    await hand.shootsThemes('run-camera', async () => {
       await hand.goes(`/runs/${runningId}`, 'run-picture');
       await decoded(hand, 'run-picture');
       await hand.at('run-camera').scrollIntoViewIfNeeded();
@@ -117,7 +108,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
   chapter('a swing in the step log holds what was seen when it began and when it ended', async () => {
     const { items } = (await read(lab(), `${finishedId}/steps`)) as { items: StepRowView[] };
     const swing = items.findLast(({ kind }) => kind === 'swing') as StepRowView;
-    await shootsThemes(hand, 'log-frames', async () => {
+    await hand.shootsThemes('log-frames', async () => {
       await hand.goes(`/runs/${finishedId}/log?row=${String(swing.seq)}`, 'row-frames');
       await decoded(hand, 'frame-picture');
       await hand.at('row-frames').scrollIntoViewIfNeeded();
@@ -130,7 +121,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     const { items } = (await read(lab(), `${finishedId}/steps`)) as { items: StepRowView[] };
     const swing = items.findLast(({ kind }) => kind === 'swing') as StepRowView;
     const at = new Date(swing.startUtcMs + 1000).toISOString();
-    await shootsThemes(hand, 'replay-camera', async () => {
+    await hand.shootsThemes('replay-camera', async () => {
       await hand.goes(`/runs/${finishedId}/replay?at=${at}`, 'replay-picture');
       await decoded(hand, 'replay-picture');
     });

@@ -1,6 +1,6 @@
 import * as fc from 'fast-check';
 import { extent, gapOf, lowerBound, valueAt } from '@/components/charts/curve';
-import { panned, zoomed } from '@/components/charts/deflection-plot-types';
+import { panned, zoomed } from '@/components/charts/time-plot-types';
 import { niceTicks } from '@/shared/lib/ticks';
 
 test('the first index at or after a value is found', () => {

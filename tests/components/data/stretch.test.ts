@@ -1,4 +1,4 @@
-import { excludedPart, partOf, touching, wholeOf } from '@/components/data/stretch';
+import { excludedPart, excludedWords, partOf, touching, wholeOf } from '@/components/data/stretch';
 import type { ExclusionView } from '@/shared/contracts/exclusions';
 
 const minute = 60_000;
@@ -42,4 +42,15 @@ test('a step is excluded when stretches in force cover all of it, whatever their
 test('what only meets the step at its end takes nothing of it; what was withdrawn is still told of', () => {
   const list = [excluded(-5, 0), excluded(11, 12), excluded(2, 3, true)];
   expect(touching(list, dwell)).toEqual([list[2]]);
+});
+
+test('what is excluded is told to those who do not see the hatching: when, how long, why; what was withdrawn is not', () => {
+  const told = excludedWords([excluded(0, 2), excluded(4, 5, true)], 'UTC').replace(/\u202f/g, ' ');
+  expect(told).toBe('1 excluded, hatched: 21:00:00 to 21:02:00, 2 min (a door)');
+  expect(excludedWords([excluded(4, 5, true)], 'UTC')).toBe('');
+  const many = excludedWords(
+    Array.from({ length: 7 }, (_, k) => excluded(k, k + 0.5)),
+    'UTC',
+  );
+  expect(many).toMatch(/^7 excluded, hatched: .*; 2 more$/);
 });

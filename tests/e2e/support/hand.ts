@@ -193,6 +193,15 @@ export class Hand {
     await shoot(this.browser, name);
   }
 
+  /** In each theme, as if it had been chosen on this device; `there` goes to what is to be seen. */
+  async shootsThemes(name: string, there: () => Promise<void>): Promise<void> {
+    for (const theme of ['light', 'red', 'dark']) {
+      await this.page.evaluate((chosen) => localStorage.setItem('evenfall.theme', chosen), theme);
+      await there();
+      await this.shoots(`${name}-${theme}`);
+    }
+  }
+
   /** Presses Tab until the focus is in the element, as somebody without a mouse does. */
   async tabsTo(testId: string, key = 'Tab'): Promise<void> {
     for (let presses = 0; presses < 120; presses += 1) {

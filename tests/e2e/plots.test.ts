@@ -1,0 +1,192 @@
+import { demoIds } from '@/db/demo/seed';
+import type { ExclusionView } from '@/shared/contracts/exclusions';
+import type { RunView } from '@/shared/contracts/runs';
+import { sizes, type Size } from '../support/browser';
+import { chapters, Hand, until } from './support/hand';
+import { labOfThisFile } from './support/lab';
+import { finishedNight, read } from './support/night';
+import { Thumb } from './support/thumb';
+
+/** Stories 6 and 7: a night is looked at closely; the room stands under the deflection, and what spoils the data is marked where it is seen. */
+
+jest.setTimeout(120_000);
+const lab = labOfThisFile();
+const base = `/labs/${demoIds.lab}`;
+let runId: string;
+/** Begin and end of the run, UTC ms. */
+let night: { from: number; to: number };
+
+beforeAll(async () => {
+  runId = await finishedNight(lab(), 1);
+  const { startedAt, endedAt } = (await read(lab(), runId)) as RunView;
+  night = { from: Date.parse(startedAt ?? ''), to: Date.parse(endedAt ?? '') };
+  const room = [
+    { name: 'box temperature', role: 'environment', unit: '°C', rateHz: 0.1 },
+    { name: 'air pressure', role: 'environment', unit: 'hPa', rateHz: 0.1 },
+  ];
+  const made = await lab()
+    .server.as('owner', 'POST', `${base}/rigs/${demoIds.rig}/devices`)
+    .send({ name: 'room', channels: room })
+    .expect(201);
+  const lines: string[] = [];
+  for (let utcMs = night.from; utcMs < night.to; utcMs += 10_000) {
+    const time_utc = new Date(utcMs).toISOString();
+    const k = (utcMs - night.from) / 10_000;
+    lines.push(JSON.stringify({ channel: 'box temperature', time_utc, value: 19.2 + 0.3 * Math.sin(k / 20) + 0.004 * ((k * 7) % 5) }));
+    lines.push(JSON.stringify({ channel: 'air pressure', time_utc, value: 1013.2 - 0.004 * k + 0.01 * ((k * 3) % 4) }));
+  }
+  const sent = await fetch(`${lab().address}/api/samples`, {
+    method: 'POST',
+    headers: { authorization: `Bearer ${String(made.body.secret)}`, 'content-type': 'application/x-ndjson' },
+    body: lines.join('\n'),
+  });
+  expect(await sent.json()).toMatchObject({ stored: lines.length });
+}, 120_000);
+
+const exclusionsOf = async () => ((await read(lab(), `${runId}/exclusions`)) as { items: ExclusionView[] }).items;
+const inForce = async () => (await exclusionsOf()).filter(({ withdrawn }) => withdrawn === null);
+
+describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
+  let hand: Hand;
+  const chapter = chapters(() => hand);
+  const canvasOf = (name: string) => hand.page.locator(`[data-testid="${name}"] .u-over`).first();
+  /** How far the cursor of a plot stands from its left edge, as a share of its width; null while there is none. */
+  const cursorIn = (name: string) =>
+    canvasOf(name).evaluate((over) => {
+      const [, px = '-10'] = /translate\((-?[\d.]+)px/.exec((over.querySelector('.u-cursor-x') as HTMLElement).style.transform) ?? [];
+      return Number(px) < 0 ? null : Number(px) / over.clientWidth;
+    });
+  beforeAll(async () => {
+    hand = new Hand(await lab().open(size, 'analyst'));
+  });
+  afterAll(async () => {
+    expect(hand.browser.errors).toEqual([]);
+    await lab().close(hand.browser);
+  });
+
+  chapter('the room stands under the deflection, each channel with its unit, and one cursor reads all of them', async () => {
+    await hand.goes(`/runs/${runId}/data`, 'channel-plot');
+    await canvasOf('deflection-plot').waitFor();
+    await canvasOf('pane-box temperature').waitFor();
+    if (size === 'phone') {
+      expect(await hand.at('pane-air pressure').locator('canvas').count()).toBe(0);
+      await hand.taps('pane-toggle-air pressure');
+    }
+    await canvasOf('pane-air pressure').waitFor();
+    await new Thumb(hand).taps(canvasOf('deflection-plot'), 0.4);
+    await hand.reads('plot-time', /^\d\d:\d\d:\d\d/);
+    await hand.reads('plot-reading', /rad/);
+    // Readings with the scatter of single ones in brackets, and the unit.
+    await hand.reads('pane-reading-box temperature', /^19\.\d+\(\d+\) °C$/);
+    await hand.reads('pane-reading-air pressure', /^101\d\.\d+\(\d+\) hPa$/);
+    await hand.taps('pane-toggle-turntable');
+    await hand.reads('pane-reading-turntable', /^[−\d.]+\(\d+\)°$/);
+    const shares = await Promise.all(['deflection-plot', 'pane-box temperature', 'pane-air pressure', 'pane-turntable'].map(cursorIn));
+    for (const share of shares) expect(share).toBeCloseTo(0.4, 1);
+    expect(Math.max(...shares.map(Number)) - Math.min(...shares.map(Number))).toBeLessThan(0.005);
+    await hand.shoots('plots');
+  });
+
+  chapter('they are zoomed and moved together, by buttons too, and the address leads back to it', async () => {
+    await hand.tapsOn('Show a shorter time');
+    await hand.tapsOn('Show a shorter time');
+    await hand.taps('plot-later');
+    await until(() => /from=.*&?to=/.test(hand.page.url()), 'the address to hold the stretch');
+    const asked = new URL(hand.page.url());
+    const stretch = ['from', 'to'].map((end) => Date.parse(asked.searchParams.get(end) ?? ''));
+    expect((Number(stretch[1]) - Number(stretch[0])) / (night.to - night.from)).toBeCloseTo(0.25, 1);
+    const rows = () => hand.at('pane-box temperature').locator('caption + thead + tbody tr').first().textContent();
+    const [first, deflection] = [await rows(), await hand.at('deflection-plot').locator('tbody tr').first().textContent()];
+    // Both tables begin with the same clock time: the left edge.
+    expect(first?.slice(0, 8)).toBe(deflection?.slice(0, 8));
+    await hand.goes(asked.pathname + asked.search, 'channel-plot');
+    await canvasOf('pane-turntable').waitFor();
+    expect((await rows())?.slice(0, 8)).toBe(first?.slice(0, 8));
+    const again = new URL(hand.page.url());
+    expect(again.searchParams.get('from')).toBe(asked.searchParams.get('from'));
+    await hand.tapsOn('Show all');
+    await until(() => !hand.page.url().includes('from='), 'the address to say nothing of the whole run');
+  });
+
+  chapter('a moment in the address is what the cursor stands on', async () => {
+    const at = new Date(night.from + 600_000).toISOString();
+    await hand.goes(`/runs/${runId}/data?at=${at}`, 'channel-plot');
+    await canvasOf('deflection-plot').waitFor();
+    expect(await cursorIn('deflection-plot')).toBeCloseTo(0.5, 1);
+    await hand.tapsOn('Show all');
+  });
+
+  chapter('a stretch is marked by a stroke over the plot and excluded with a reason', async () => {
+    await hand.taps('mark');
+    await hand.reads('marking', /Drag over the plot/);
+    await new Thumb(hand).strokes(canvasOf('deflection-plot'), 0.5, 0.6);
+    await hand.reads('marking', /Marked: \d\d:\d\d:\d\d to \d\d:\d\d:\d\d, /);
+    await hand.shoots('marked');
+    await hand.taps('mark-exclude');
+    await hand.types('exclude-reason', `a lorry, ${size}`);
+    await hand.shoots('exclude-marked');
+    await hand.taps('exclude-send');
+    await hand.hears('channel-plot', new RegExp(`1 excluded, hatched: \\d\\d:\\d\\d:\\d\\d to .* \\(a lorry, ${size}\\)`));
+    const [made] = await inForce();
+    const shares = [made?.startUtcMs, made?.endUtcMs].map((at) => (Number(at) - night.from) / (night.to - night.from));
+    expect(shares[0]).toBeCloseTo(0.5, 1);
+    expect(shares[1]).toBeCloseTo(0.6, 1);
+  });
+
+  chapter('what is hatched is tapped to see who excluded it and why, and is withdrawn there', async () => {
+    await hand.page.evaluate(() => window.scrollTo(0, 0));
+    await new Thumb(hand).taps(canvasOf('deflection-plot'), 0.55);
+    await hand.reads('tapped-exclusion', new RegExp(`Excluded .*a lorry, ${size}.*by Tam Ferrowdale`));
+    await hand.shoots('tapped-exclusion');
+    await hand.taps(hand.page.getByTestId('tapped-exclusion').getByTestId('withdraw'));
+    await hand.types('withdraw-reason', `it was next door, ${size}`);
+    await hand.taps('withdraw-send');
+    await hand.reads('tapped-exclusion', new RegExp(`Withdrawn .*it was next door, ${size}`));
+    await hand.taps('sheet-close');
+    expect(await inForce()).toEqual([]);
+  });
+
+  chapter('without any drag: two taps, or the cursor and a button', async () => {
+    await hand.taps('mark');
+    const thumb = new Thumb(hand);
+    await thumb.taps(canvasOf('deflection-plot'), 0.3);
+    await hand.reads('marking', /now tap where it ends/);
+    await thumb.taps(canvasOf('pane-box temperature'), 0.2);
+    await hand.reads('marking', /Marked: /);
+    await hand.taps('mark-end');
+    await hand.reads('marking', /now tap where it ends/);
+    await hand.taps('mark-leave');
+    await hand.at('mark').waitFor();
+  });
+
+  chapter('by the keyboard alone: the cursor is moved, Enter begins and ends, and the sheet follows', async () => {
+    await hand.tabsTo('mark');
+    await hand.page.keyboard.press('Enter');
+    // The focus is on the plot.
+    for (let presses = 0; presses < 3; presses += 1) await hand.page.keyboard.press('ArrowRight');
+    await hand.page.keyboard.press('Enter');
+    await hand.reads('marking', /now tap where it ends/);
+    for (let presses = 0; presses < 5; presses += 1) await hand.page.keyboard.press('ArrowRight');
+    await hand.page.keyboard.press('Enter');
+    await hand.reads('marking', /Marked: /);
+    await hand.tabsTo('mark-exclude');
+    await hand.page.keyboard.press('Enter');
+    await hand.at('exclude-sheet').waitFor();
+    await hand.tabsTo('exclude-reason');
+    await hand.page.keyboard.type(`keys, ${size}`);
+    await hand.tabsTo('exclude-send');
+    await hand.page.keyboard.press('Enter');
+    await hand.hears('channel-plot', /1 excluded, hatched/);
+    const [made] = await inForce();
+    // Five presses of a hundredth of what is shown.
+    expect((Number(made?.endUtcMs) - Number(made?.startUtcMs)) / (night.to - night.from)).toBeCloseTo(0.05, 2);
+    await hand.asks('POST', `/exclusions/${made?.id ?? ''}/withdraw`, { body: { reason: 'the end of the test' } });
+  });
+
+  chapter('it is looked at in every theme', async () => {
+    await hand.shootsThemes('plots', async () => {
+      await hand.goes(`/runs/${runId}/data?at=${new Date(night.from + 900_000).toISOString()}`, 'channel-plot');
+      await canvasOf('pane-box temperature').waitFor();
+    });
+  });
+});
