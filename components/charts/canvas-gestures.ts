@@ -56,9 +56,10 @@ export function listenToFingers(plot: UPlot, latest: { readonly current: Gesture
     const ms = timeAt(before) - timeAt(event.clientX);
     view.change((span) => panned(span, view.whole, ms));
   };
-  const up = (event: PointerEvent) => {
-    touches.delete(event.pointerId);
-    if (event.type !== 'pointerup' || moved >= tapPx) return;
+  const up = (event: PointerEvent) => void touches.delete(event.pointerId);
+  // Not when the finger goes up: a sheet that opened then would get the click that follows, and close.
+  const click = (event: MouseEvent) => {
+    if (moved >= tapPx) return;
     const { view, painter, onTap } = latest.current;
     const at = timeAt(event.clientX);
     view.point(at);
@@ -76,6 +77,7 @@ export function listenToFingers(plot: UPlot, latest: { readonly current: Gesture
   over.addEventListener('pointerdown', down, { signal });
   over.addEventListener('pointermove', move, { signal });
   for (const end of ['pointerup', 'pointercancel'] as const) over.addEventListener(end, up, { signal });
+  over.addEventListener('click', click, { signal });
   over.addEventListener('wheel', wheel, { passive: false, signal });
   return () => deaf.abort();
 }

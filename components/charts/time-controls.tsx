@@ -7,12 +7,12 @@ import type { TimeHand } from './use-time-view';
 export function TimeControls({ hand, timeZone }: { hand: TimeHand; timeZone: string }) {
   const { cursor, shownAll } = hand;
   return (
-    <View className="flex-row flex-wrap items-center justify-between gap-x-2" role="group" aria-label="Shown time">
-      <View className="min-h-target flex-row flex-wrap items-baseline gap-x-2" testID="plot-time">
+    <View className="flex-row items-center justify-between gap-x-2" role="group" aria-label="Shown time">
+      <View className="min-w-0 shrink flex-row flex-wrap items-baseline gap-x-2" testID="plot-time">
         {cursor === null ? null : <Num size={17}>{formatClock(cursor, { timeZone, precision: 'seconds' })}</Num>}
         <Label>{`${cursor === null ? 'Times in ' : ''}${zoneName(timeZone)}`}</Label>
       </View>
-      <View className="flex-row">
+      <View className="flex-none flex-row">
         <IconButton icon="back" label="Earlier" onPress={() => hand.pan(-1)} disabled={shownAll} testID="plot-earlier" />
         <IconButton icon="forward" label="Later" onPress={() => hand.pan(1)} disabled={shownAll} testID="plot-later" />
         <IconButton icon="minus" label="Show a longer time" onPress={() => hand.zoom(2)} disabled={shownAll} />

@@ -1,3 +1,5 @@
+import { unitSign } from '@/shared/lib/format-number';
+
 /** One channel over time: what every plot of this kind is given, whoever draws it. */
 
 export interface TimeSpan {
@@ -41,7 +43,7 @@ export interface TimePlotProps {
   /** What is shown, for those who do not see it. */
   title: string;
   view: TimeView;
-  /** A longer step is missing data, ms; absent: 8 times the usual one. */
+  /** A longer step is missing data, ms; absent: 8 times the usual one. Infinite: the line is known between its points too. */
   gapMs?: number | undefined;
   /** Where the sources stood when. */
   bands?: readonly StepBand[] | undefined;
@@ -62,6 +64,9 @@ export interface TimePlotProps {
   heightPx?: number | undefined;
   testID?: string | undefined;
 }
+
+/** What the numbers beside a plot are in: radians are drawn in mrad. */
+export const axisUnit = (unit: string): string => (unit === 'rad' ? 'mrad' : unitSign(unit));
 
 /** Zooms about `at` by `factor` (below 1: closer), kept within the whole and no closer than `leastMs`. */
 export function zoomed(span: TimeSpan, whole: TimeSpan, change: { at: number; factor: number; leastMs?: number }): TimeSpan {

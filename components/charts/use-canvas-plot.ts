@@ -1,7 +1,7 @@
 import { useEffect, useMemo, useRef, type RefObject } from 'react';
 import UPlot from 'uplot';
 import type { ThemeColors } from '@/components/theme';
-import { MINUS, unitSign } from '@/shared/lib/format-number';
+import { MINUS } from '@/shared/lib/format-number';
 import { formatClock } from '@/shared/lib/format-time';
 import { drawBands, drawExcluded, drawMarked } from './canvas-drawing';
 import { listenToFingers, type GestureInput } from './canvas-gestures';
@@ -40,16 +40,21 @@ function withGaps({ utcMs, value, gapMs }: Pick<TimePlotProps, 'utcMs' | 'value'
 }
 
 function optionsOf(latest: RefObject<CanvasPlotInput>, width: number): UPlot.Options {
-  const { colors, timeZone, unit, heightPx, axis: hasTimes, view } = latest.current;
+  const { colors, timeZone, unit, gapMs, heightPx, axis: hasTimes, view } = latest.current;
   const axis = { stroke: colors.dim, grid: { stroke: colors.line, width: 1 }, ticks: { stroke: colors.line, width: 1, size: 4 } };
-  const scaleOf = unit === 'rad' ? { factor: 1e3, sign: 'mrad' } : { factor: 1, sign: unitSign(unit) };
+  const factor = unit === 'rad' ? 1e3 : 1;
   return {
     width,
     height: heightPx,
     ms: 1,
     legend: { show: false },
     padding: [8, 22, 0, 0],
-    cursor: { bind: noMouse, y: false, points: { size: 8, fill: colors.lamp, stroke: colors.lamp } },
+    cursor: {
+      bind: noMouse,
+      drag: noDrag,
+      y: false,
+      points: { show: gapMs !== Infinity, size: 8, fill: colors.lamp, stroke: colors.lamp },
+    },
     scales: {
       x: { time: false, auto: false, min: view.span.from, max: view.span.to },
       y: { auto: true, range: (_, least, greatest) => roomyRange(least, greatest) },
@@ -70,11 +75,8 @@ function optionsOf(latest: RefObject<CanvasPlotInput>, width: number): UPlot.Opt
       {
         ...axis,
         font: font('Atkinson Hyperlegible Mono'),
-        size: 56,
-        label: scaleOf.sign,
-        labelFont: font('Atkinson Hyperlegible Next'),
-        labelSize: 20,
-        values: (_, ticks) => ticks.map((y) => String(Number((y * scaleOf.factor).toPrecision(6))).replace('-', MINUS)),
+        size: 66,
+        values: (_, ticks) => ticks.map((y) => String(Number((y * factor).toPrecision(6))).replace('-', MINUS)),
       },
     ],
     hooks: {
@@ -88,6 +90,9 @@ function optionsOf(latest: RefObject<CanvasPlotInput>, width: number): UPlot.Opt
 const noMouse = Object.fromEntries(
   ['mousemove', 'mousedown', 'mouseup', 'mouseenter', 'mouseleave', 'click', 'dblclick'].map((name) => [name, () => null]),
 );
+
+/** It would swallow clicks, too, that it takes for the end of a drag. */
+const noDrag: UPlot.Cursor.Drag = { x: false, y: false, setScale: false, click: () => undefined };
 
 const timeIncrements = [1, 2, 5, 10, 15, 30, 60, 120, 300, 600, 900, 1800, 3600, 7200, 10_800, 21_600, 43_200, 86_400].map((s) => s * 1000);
 
@@ -120,6 +125,8 @@ export function useCanvasPlot(input: CanvasPlotInput): void {
     if (element === null) return undefined;
     const made = new UPlot(optionsOf(latest, Math.max(200, element.clientWidth)), latestData.current, element);
     plot.current = made;
+    // The library's own line is blue, also where nothing may be.
+    made.over.querySelector<HTMLElement>('.u-cursor-x')?.style.setProperty('border-right-color', colors.lamp);
     const deafen = listenToFingers(made, latest);
     const observer =
       typeof ResizeObserver === 'undefined'

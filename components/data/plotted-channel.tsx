@@ -3,7 +3,7 @@ import { Pressable, View } from 'react-native';
 import { useLab } from '@/components/api';
 import { readingAt } from '@/components/charts/reading';
 import { TimePlot } from '@/components/charts/time-plot';
-import type { TimePlotProps, TimeSpan } from '@/components/charts/time-plot-types';
+import { axisUnit, type TimePlotProps, type TimeSpan } from '@/components/charts/time-plot-types';
 import { Body, Icon, Label, Num } from '@/components/ui';
 import type { ChannelView } from '@/shared/contracts/data';
 import { readingWords } from './reading-words';
@@ -64,6 +64,7 @@ export function Pane({ name, title, open, onToggle, series, empty, linked, heigh
         <Icon name={open ? 'open' : 'forward'} size={16} tone="dim" />
         <Body className="min-w-0 shrink grow" numberOfLines={1}>
           {title}
+          {series === null ? '' : `, ${axisUnit(series.unit)}`}
         </Body>
         {words === '' ? null : <Num testID={`pane-reading-${name}`}>{words}</Num>}
       </Pressable>

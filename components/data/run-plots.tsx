@@ -6,7 +6,7 @@ import { standsOf, stepsOfLog } from '@/components/charts';
 import { drawnMark } from '@/components/charts/marking';
 import { keysOf, TimeControls } from '@/components/charts/time-controls';
 import { TimePlot } from '@/components/charts/time-plot';
-import type { StepBand, TimeSpan } from '@/components/charts/time-plot-types';
+import { axisUnit, type StepBand, type TimeSpan } from '@/components/charts/time-plot-types';
 import { useTimeView } from '@/components/charts/use-time-view';
 import { useCalm } from '@/components/runs/use-now';
 import { Body, Empty, Label, Loading, Num, Panel, Sheet, useWide } from '@/components/ui';
@@ -53,7 +53,7 @@ export function RunPlots(props: RunPlotsProps) {
   const [from, to] = [coarse?.utcMs[0], coarse?.utcMs.at(-1)];
   if (coarse === undefined) return <Loading label="Loading the data" />;
   if (from === undefined || to === undefined) return <Empty title="No samples in this run" />;
-  return <LinkedPlots {...props} total={coarse.total} isThinned={coarse.total > coarse.utcMs.length} whole={{ from, to }} />;
+  return <LinkedPlots {...props} coarse={coarse} whole={{ from, to }} />;
 }
 
 /** What the linked plots show is kept in the address, so that a link leads to it. */
@@ -76,9 +76,11 @@ function useAddressedView(whole: TimeSpan) {
   return { hand, wanted, panes: readAddress({ panes: params.panes }).panes };
 }
 
-type LinkedPlotsProps = RunPlotsProps & { total: number; isThinned: boolean; whole: TimeSpan };
+type Samples = NonNullable<ReturnType<typeof useRunSamples>['data']>['data'];
+/** `coarse`: the whole run, which is drawn until the stretch that is asked for has come. */
+type LinkedPlotsProps = RunPlotsProps & { coarse: Samples; whole: TimeSpan };
 
-function LinkedPlots({ runId, channel, others, exclusions, total, isThinned, whole }: LinkedPlotsProps) {
+function LinkedPlots({ runId, channel, others, exclusions, coarse, whole }: LinkedPlotsProps) {
   const { timeZone } = useLab();
   const wide = useWide();
   const { hand, wanted, panes } = useAddressedView(whole);
@@ -86,13 +88,13 @@ function LinkedPlots({ runId, channel, others, exclusions, total, isThinned, who
   const [excludes, setExcludes] = useState<TimeSpan | null>(null);
   const [tapped, setTapped] = useState<readonly string[]>([]);
   const rows = useLabQuery(listSteps, { params: { runId } }).data?.data.items ?? noRows;
-  const samples = useRunSamples(runId, channel.id, { span: wanted }).data?.data;
+  const samples = useRunSamples(runId, channel.id, { span: wanted }).data?.data ?? coarse;
   const series = useMemo<PlottedSeries>(
     () => ({
-      utcMs: samples?.utcMs ?? [],
-      value: samples?.value ?? [],
+      utcMs: samples.utcMs,
+      value: samples.value,
       unit: channel.unit,
-      thinned: samples !== undefined && samples.total > samples.utcMs.length,
+      thinned: samples.total > samples.utcMs.length,
     }),
     [samples, channel.unit],
   );
@@ -122,7 +124,9 @@ function LinkedPlots({ runId, channel, others, exclusions, total, isThinned, who
     <Panel className="gap-2" testID="channel-plot">
       <TimeControls hand={hand} timeZone={timeZone} />
       <View className="flex-row flex-wrap items-baseline justify-between gap-x-3">
-        <Body strong>{channel.name}</Body>
+        <Body strong>
+          {channel.name}, {axisUnit(channel.unit)}
+        </Body>
         {words === '' ? null : <Num testID="plot-reading">{words}</Num>}
       </View>
       <TimePlot
@@ -146,9 +150,9 @@ function LinkedPlots({ runId, channel, others, exclusions, total, isThinned, who
       />
       <Panes {...{ runId, others, rows, linked, wanted, panes }} />
       <Label>
-        {formatFixed(total, { decimals: 0 })} samples
-        {isThinned ? '; least and greatest of each stretch are drawn, all of them when you look closer' : ''}. In brackets: how far single
-        readings scatter about there (k = 1).
+        {formatFixed(coarse.total, { decimals: 0 })} samples
+        {coarse.total > coarse.utcMs.length ? '; least and greatest of each stretch are drawn, all of them when you look closer' : ''}. In
+        brackets: how far single readings scatter about there (k = 1).
       </Label>
       <ExportLinks channel={channel} whole={spanOf(whole)} shown={wanted === null ? null : spanOf(wanted)} />
       {excludes === null ? null : (
