@@ -11,13 +11,9 @@ import {
   noteDatabaseBack,
   noteGrave,
   noteInterruption,
-  noteRefusedWithdrawal,
-  requestHold,
-  requestHoldAfterDwell,
-  requestStop,
   returnRefusal,
-  withdrawHold,
 } from './halting';
+import { noteRefusedWithdrawal, requestHold, requestHoldAfterDwell, requestStop, withdrawHold } from './requested-halts';
 import {
   hasRestarted,
   noteArmEnded,

@@ -30,13 +30,12 @@ import {
   noteDatabaseBack,
   noteRefusedResume,
   noteRestart,
-  requestHold,
-  requestStop,
   resume,
   resumeRefusal,
   returnRefusal,
   takeAheadUnseen,
 } from './halting';
+import { requestHold, requestStop } from './requested-halts';
 import { noteReady, noteReset, noteStandstill, noteStrangeMotion } from './observations';
 import { type Advance, CHART_VERSION, type ChartState, type RunContext, type RunEvent, type RunSnapshot } from './run-context';
 import { askAgain, dropAhead, expectEnd, finishMotion, noteBegan, noteEnded, takeAhead } from './motions';

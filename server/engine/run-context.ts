@@ -206,6 +206,8 @@ export interface RunContext {
   finishing?: Finishing;
   /** Set by `hold after this dwell`. */
   holdAfterStep: string | null;
+  /** Keys of the last holds and stops: a repeat that comes late, to another process too, is no second one. Absent: none. */
+  actedOn?: string[];
   intervention: Intervention | null;
   interruption: Interruption | null;
   /** When the hold or stop that is being carried out came. */
@@ -233,10 +235,10 @@ export type RunEvent =
   | LinkTold
   | Told<'begin', { controller: ControllerState | null }>
   | Told<'deadline'>
-  /** `acted`: id of the command that already went to the controller. */
-  | Told<'hold', { by: string; acted: string | null }>
-  | Told<'stop', { by: string; acted: string | null }>
-  | Told<'hold-after-dwell', { by: string }>
+  /** `acted`: id of the command that already went to the controller; `key`: the same for each repeat of one request. */
+  | Told<'hold', { by: string; acted: string | null; key?: string | null }>
+  | Told<'stop', { by: string; acted: string | null; key?: string | null }>
+  | Told<'hold-after-dwell', { by: string; key?: string | null }>
   | Told<'withdraw-hold', { by: string }>
   /** To end on a whole pair; `by` empty: for the night window, which ends at `finishByUtcMs`, or for the few good dwells. */
   | Told<'finish-early', { by: string; finishByUtcMs: number | null }>

@@ -100,25 +100,22 @@ export class RunDriver {
     this.timers.keepAlive();
   }
 
-  /** Decelerates at once; saved after that. Holding a run that is held already changes nothing. */
-  hold(by: string): Answer {
-    if (this.isOver()) return { ok: false, why: 'The run is over.' };
-    if (this.snapshot.state === 'held' && this.halting === 0) return { ok: true, serverAtUtcMs: this.now().utcMs };
-    return this.actFirst('hold', by);
+  /** Decelerates at once; saved after that. Holding a run that is held already, or a repeat of an old request (`key`), changes nothing. */
+  hold(by: string, key: string | null = null): Answer {
+    return this.knownAnswer(key, this.snapshot.state === 'held' && this.halting === 0) ?? this.actFirst('hold', { by, key });
   }
 
   /** Decelerates at once and ends the run. */
-  stop(by: string): Answer {
-    if (this.isOver()) return { ok: false, why: 'The run is over.' };
-    return this.actFirst('stop', by);
+  stop(by: string, key: string | null = null): Answer {
+    return this.knownAnswer(key) ?? this.actFirst('stop', { by, key });
   }
 
   /** Holds when the present step has ended. */
-  holdAfterDwell(by: string): Answer {
-    if (this.isOver()) return { ok: false, why: 'The run is over.' };
+  holdAfterDwell(by: string, key: string | null = null): Answer {
+    const [known, at] = [this.knownAnswer(key), this.now()];
+    if (known !== null) return known;
     if (this.snapshot.state === 'held' || this.snapshot.state === 'holding') return { ok: false, why: 'The run is held already.' };
-    const at = this.now();
-    this.enqueue({ event: { type: 'hold-after-dwell', at, by } });
+    this.enqueue({ event: { type: 'hold-after-dwell', at, by, key } });
     return { ok: true, serverAtUtcMs: at.utcMs };
   }
 
@@ -131,10 +128,9 @@ export class RunDriver {
     const nowUtcMs = this.now().utcMs;
     this.planned ??= plannedRun(start, this.snapshot.context.startedAtUtcMs ?? nowUtcMs);
     const { snapshot, planned } = this;
-    const predictedEndUtcMs = this.predict(snapshot, nowUtcMs);
     const standing = { arm: armNow(), lockedBy: this.lockedBy(), lastSeq: this.chain.seq };
-    const facts = factsOf({ start, snapshot, nowUtcMs, ...standing, predictedEndUtcMs, planned });
-    return withDatabase(facts, this.databaseAwaySinceUtcMs);
+    const predictedEndUtcMs = this.predict(snapshot, nowUtcMs);
+    return withDatabase(factsOf({ start, snapshot, nowUtcMs, ...standing, predictedEndUtcMs, planned }), this.databaseAwaySinceUtcMs);
   }
 
   /** The database does not answer, as the keeper of the rig lease noticed: also a run that has nothing to write is interrupted. */
@@ -186,14 +182,21 @@ export class RunDriver {
     for (const item of this.inbox.splice(0)) if (typeof item !== 'string') item.done?.(null);
   }
 
-  private actFirst(kind: 'hold' | 'stop', by: string): Answer {
+  /** Where nothing is to be done any more: the run is over, or this was done before. */
+  private knownAnswer(key: string | null, isDone = false): Answer | null {
+    if (this.isOver()) return { ok: false, why: 'The run is over.' };
+    const isRepeat = key !== null && this.snapshot.context.actedOn?.includes(key) === true;
+    return isDone || isRepeat ? { ok: true, serverAtUtcMs: this.now().utcMs } : null;
+  }
+
+  private actFirst(kind: 'hold' | 'stop', asked: { by: string; key: string | null }): Answer {
     const at = this.now();
     const id = this.actedId(kind, at.utcMs);
     this.halting += 1;
     const releaseDrivers = this.parts.start.rig.motion?.safeWhenFree === true;
     const kept = new Promise((done) => {
       // What the link tells while it sends comes after the hold, and is taken up after it.
-      this.inbox.push({ event: { type: kind, at, by, acted: id }, done });
+      this.inbox.push({ event: { type: kind, at, ...asked, acted: id }, done });
       this.parts.link.send(kind === 'hold' ? { kind, id } : { kind, id, releaseDrivers });
     });
     this.saver.hurryUp();

@@ -30,6 +30,7 @@ export function answerRoute(route: MountedRoute, parts: RouteParts): RequestHand
     const query = parsedBy(contract, 'query', req.query);
     const body = await readBody(contract, { req, res, readJson: parts.readJson });
     const ifMatch = readIfMatch(contract, req);
+    const key = contract.idempotent === true ? idempotencyKeyOf(req.get('idempotency-key')) : null;
     const reply: { etag: string | null } = { etag: null };
     const context = {
       ...caller,
@@ -38,6 +39,7 @@ export function answerRoute(route: MountedRoute, parts: RouteParts): RequestHand
       query,
       body,
       ifMatch,
+      key,
       services: parts.services,
       req,
       res,
@@ -58,7 +60,7 @@ export function answerRoute(route: MountedRoute, parts: RouteParts): RequestHand
       await route.handle(context);
       return;
     }
-    const answer = contract.idempotent === true ? await once(contract, { context, req, parts }, act) : await act();
+    const answer = key === null ? await act() : await once(contract, { context, req, key, parts }, act);
     rethrowKeptProblem(answer);
     send(res, req, answer);
   };
@@ -69,7 +71,7 @@ function askAtTheRig(
   { which, urgent, elseStored }: AtTheRig,
   context: RouteContext,
 ): Promise<IdempotencyAnswer> {
-  const { req, services, ifMatch } = context;
+  const { req, services, ifMatch, key } = context;
   const [me, membership] = [context.me as SignedIn | null, context.membership as Membership | null];
   const question = {
     route: contract.name,
@@ -77,6 +79,7 @@ function askAtTheRig(
     query: req.query,
     body: (req.body ?? {}) as unknown,
     ifMatch,
+    key,
     me: me === null ? null : { userId: me.userId, name: me.name, email: me.email },
     membership,
   };
@@ -86,11 +89,10 @@ function askAtTheRig(
 
 function once(
   contract: RouteContract,
-  from: { context: RouteContext; req: Request; parts: RouteParts },
+  from: { context: RouteContext; req: Request; key: string; parts: RouteParts },
   act: () => Promise<IdempotencyAnswer>,
 ): Promise<IdempotencyAnswer> {
-  const { context, req, parts } = from;
-  const key = idempotencyKeyOf(req.get('idempotency-key'));
+  const { context, req, key, parts } = from;
   const fingerprint = fingerprintOf(
     { method: req.method, path: req.path, ifMatch: context.ifMatch, body: context.body },
     parts.services.sha256,

@@ -69,8 +69,8 @@ export function rethrowKeptProblem(answer: IdempotencyAnswer): void {
 }
 
 /**
- * Keys of hold and stop, in memory: a repeat of these two is harmless in the engine and they must not wait for a
- * table that may be unreachable.
+ * Keys of hold and stop, in memory: these must not wait for a table that may be unreachable. A repeat that comes to another process is known
+ * to the run (`actedOn` of its snapshot).
  */
 export class MemoryIdempotency implements IdempotencyPort {
   private readonly kept = new Map<string, { fingerprint: string; answer: IdempotencyAnswer | null }>();

@@ -36,6 +36,8 @@ export interface RouteContext<R extends RouteContract = RouteContract> {
   services: Services;
   /** The version named by `If-Match`, without quotes; never empty where the contract says `etag: 'required'`. */
   ifMatch: string | null;
+  /** Its `Idempotency-Key`; null where the contract asks for none. */
+  key: string | null;
   /** Names the version of the answer; sent as ETag. */
   setEtag(version: string): void;
   /** Sets the session cookie. */

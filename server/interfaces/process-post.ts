@@ -19,6 +19,8 @@ export interface RigQuestion {
   query: unknown;
   body: unknown;
   ifMatch: string | null;
+  /** The request's `Idempotency-Key`, where it has one. */
+  key?: string | null;
   me: { userId: string; name: string; email: string } | null;
   membership: { labId: string; labName: string; timeZone: string; role: Role } | null;
 }

@@ -116,7 +116,7 @@ export class Answers {
     if (asked.act === 'stop' && world.over && world.state === 'stopped') return iso(world.machineClock.utcMs());
     const driver = await this.takenUp();
     if (asked.act === 'resume') return this.resume(driver, asked);
-    const answer = asked.act === 'stop' ? driver.stop(asked.by) : driver.hold(asked.by);
+    const answer = asked.act === 'stop' ? driver.stop(asked.by, asked.key) : driver.hold(asked.by, asked.key);
     const serverAt = await this.accepted(answer);
     if (!this.isStill(process)) return serverAt;
     world.witness.halts.push({ kind: asked.act === 'stop' ? 'stop' : 'hold', atMs: world.nowMs });

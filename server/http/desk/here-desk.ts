@@ -32,10 +32,10 @@ export class HereDesk implements RigDesk {
     if (route === undefined) throw new Error(`nobody answers the route ${question.route} at the rig`);
     const { contract } = route;
     const services = this.services();
-    const { params, ifMatch, me, membership } = question;
+    const { params, ifMatch, key = null, me, membership } = question;
     let etag: string | null = null;
     const context = {
-      ...{ params, ifMatch, me, membership, services },
+      ...{ params, ifMatch, key, me, membership, services },
       query: parsedBy(contract, 'query', question.query),
       body: parsedBy(contract, 'body', question.body),
       setEtag: (version: string) => {

@@ -17,7 +17,7 @@ import { assertFreshTap, type Caller } from '../begin-run';
 import { atTheRig, rigOfAddress, rigOfItsRun } from '../desk/at-the-rig';
 import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
-import { mount } from '../route-context';
+import { mount, type SignedIn } from '../route-context';
 import { resumeSubject, skipSubject, startSubject } from '../reviews';
 import { loadRun } from '../run-view';
 import type { Services } from '../services';
@@ -129,17 +129,20 @@ function moveWords(step: LeafStep, { stations }: RigDocument): string {
   return station === undefined ? `swing to ${step.to}` : `swing to ${step.to} (${formatDegrees(station.value)})`;
 }
 
+/** Of a request and its repeats, whoever keeps answers: a run remembers it across processes. */
+const keyOf = ({ me, key }: { me: SignedIn; key: string | null }): string | null => (key === null ? null : `${me.userId} ${key}`);
+
 const haltRoutes = [
   mount(contracts.holdRun, async (context) => {
     const { params, me, membership, services } = context;
-    const answer = (await driverOf(services, membership.labId, params.runId)).hold(me.name);
+    const answer = (await driverOf(services, membership.labId, params.runId)).hold(me.name, keyOf(context));
     auditLater(context, 'run.hold-asked', { runId: params.runId });
     return accepted(services, params.runId, answer);
   }),
 
   mount(contracts.holdAfterDwell, async (context) => {
     const { params, me, membership, services } = context;
-    const answer = (await driverOf(services, membership.labId, params.runId)).holdAfterDwell(me.name);
+    const answer = (await driverOf(services, membership.labId, params.runId)).holdAfterDwell(me.name, keyOf(context));
     auditLater(context, 'run.hold-after-dwell-asked', { runId: params.runId });
     return accepted(services, params.runId, answer);
   }),
@@ -159,7 +162,7 @@ const haltRoutes = [
       if (run.state === 'stopped') return { runId: run.id, serverAt: isoOf(services.clock.utcMs()) };
       if (services.supervisor.quarantinedOf(run.rigId)?.start.runId === run.id) return endQuarantined(context, run);
     }
-    const answer = (await driverOf(services, membership.labId, params.runId)).stop(me.name);
+    const answer = (await driverOf(services, membership.labId, params.runId)).stop(me.name, keyOf(context));
     auditLater(context, 'run.stop-asked', { runId: params.runId });
     return accepted(services, params.runId, answer);
   }),

@@ -174,9 +174,11 @@ describe('a run', () => {
   test('is held, resumed and stopped; each act shows who, when, and when the controller confirmed', async () => {
     const runId = await lab.run(quickProtocol());
     await lab.advance(3_600_000, () => lab.services.supervisor.driverOf(runId)?.facts().current?.kind === 'dwell');
-    const held = await lab.intervene(runId, 'hold', { who: 'viewer' }).expect(202);
+    const held = await lab.intervene(runId, 'hold', { who: 'viewer' }).set('Idempotency-Key', 'one-tap').expect(202);
     expect(held.body).toEqual({ runId, serverAt: iso(0) });
     const view = await lab.until(runId, 'held');
+    // So that the next process knows a repeat of it.
+    expect(lab.services.supervisor.driverOf(runId)?.state().context.actedOn).toEqual([expect.stringMatching(/^\S+ one-tap$/)]);
     expect(view.intervention).toMatchObject({
       kind: 'hold',
       by: 'Pim Oldershaw',
