@@ -1,8 +1,10 @@
-import { useState } from 'react';
+import { memo, useMemo, useState } from 'react';
 import { View } from 'react-native';
-import Svg, { Path } from 'react-native-svg';
+import Svg, { Line, Path } from 'react-native-svg';
 import { useTheme } from '@/components/theme';
+import type { ReadingRange } from '@/shared/lib/reading-range';
 import type { Series } from './curve';
+import { sparkPath } from './spark-path';
 
 interface SparkLineProps {
   series: Series;
@@ -10,52 +12,31 @@ interface SparkLineProps {
   fromUtcMs: number;
   toUtcMs: number;
   heightPx?: number;
+  /** Of the series. */
+  range: ReadingRange;
+  /** Where a line stands for the moment that is read out. */
+  atUtcMs?: number | undefined;
   /** Samples further apart than this are not joined: a gap is drawn as a gap. */
   gapMs: number;
 }
 
 /** A channel as one small line without axes, least to greatest over its height; the figures stand beside it. */
-export function SparkLine({ series, fromUtcMs, toUtcMs, heightPx = 28, gapMs }: SparkLineProps) {
+export const SparkLine = memo(function SparkLine({ series, range, fromUtcMs, toUtcMs, heightPx = 28, gapMs, atUtcMs }: SparkLineProps) {
   const { colors } = useTheme();
   const [widthPx, setWidthPx] = useState(0);
+  const d = useMemo(
+    () => (widthPx === 0 ? '' : sparkPath(series, { range, fromUtcMs, toUtcMs, gapMs, widthPx, heightPx })),
+    [series, range, fromUtcMs, toUtcMs, gapMs, widthPx, heightPx],
+  );
+  const atPx = atUtcMs === undefined ? null : (widthPx * (atUtcMs - fromUtcMs)) / Math.max(1, toUtcMs - fromUtcMs);
   return (
     <View aria-hidden style={{ height: heightPx }} onLayout={({ nativeEvent }) => setWidthPx(nativeEvent.layout.width)}>
       {widthPx === 0 ? null : (
         <Svg width={widthPx} height={heightPx}>
-          <Path
-            d={sparkPath(series, { fromUtcMs, toUtcMs, gapMs, widthPx, heightPx })}
-            stroke={colors.dim}
-            strokeWidth={1.5}
-            fill="none"
-            strokeLinejoin="round"
-            strokeLinecap="round"
-          />
+          <Path d={d} stroke={colors.dim} strokeWidth={1.5} fill="none" strokeLinejoin="round" strokeLinecap="round" />
+          {atPx === null ? null : <Line x1={atPx} x2={atPx} y1={0} y2={heightPx} stroke={colors.lamp} strokeWidth={2} />}
         </Svg>
       )}
     </View>
   );
-}
-
-interface SparkFrame extends Pick<SparkLineProps, 'fromUtcMs' | 'toUtcMs' | 'gapMs'> {
-  widthPx: number;
-  heightPx: number;
-}
-
-/** The line as an SVG path, px; a channel that stays the same runs through the middle. */
-export function sparkPath({ x, y }: Series, { fromUtcMs, toUtcMs, gapMs, widthPx, heightPx }: SparkFrame): string {
-  const values = Array.from(y).filter(Number.isFinite);
-  const [least, greatest] = [Math.min(...values), Math.max(...values)];
-  const edge = 2;
-  const across = (at: number) => (widthPx * (at - fromUtcMs)) / Math.max(1, toUtcMs - fromUtcMs);
-  const up = (value: number) =>
-    greatest === least ? heightPx / 2 : heightPx - edge - ((heightPx - 2 * edge) * (value - least)) / (greatest - least);
-  let path = '';
-  let last = -Infinity;
-  for (let i = 0; i < x.length; i += 1) {
-    const [at, value] = [x[i] as number, y[i] as number];
-    if (!Number.isFinite(value)) continue;
-    path += `${at - last > gapMs ? 'M' : 'L'}${across(at).toFixed(1)} ${up(value).toFixed(1)}`;
-    last = at;
-  }
-  return path;
-}
+});

@@ -8,6 +8,7 @@ import { keysOf, TimeControls } from '@/components/charts/time-controls';
 import { TimePlot } from '@/components/charts/time-plot';
 import { axisUnit, type StepBand, type TimeSpan } from '@/components/charts/time-plot-types';
 import { useTimeView } from '@/components/charts/use-time-view';
+import { TextLink } from '@/components/runs/recent-steps';
 import { useCalm } from '@/components/runs/use-now';
 import { Body, Empty, Label, Loading, Num, Panel, Sheet, useWide } from '@/components/ui';
 import type { ChannelView } from '@/shared/contracts/data';
@@ -154,6 +155,11 @@ function LinkedPlots({ runId, channel, others, exclusions, coarse, whole }: Link
         {coarse.total > coarse.utcMs.length ? '; least and greatest of each stretch are drawn, all of them when you look closer' : ''}. In
         brackets: how far single readings scatter about there (k = 1).
       </Label>
+      {hand.cursor === null ? null : (
+        <View className="flex-row">
+          <TextLink href={`/runs/${runId}/replay?at=${new Date(hand.cursor).toISOString()}`} label="This moment in the replay" />
+        </View>
+      )}
       <ExportLinks channel={channel} whole={spanOf(whole)} shown={wanted === null ? null : spanOf(wanted)} />
       {excludes === null ? null : (
         <ExcludeSheet

@@ -1,4 +1,5 @@
 import { gapOf, valueAt, type Series } from '@/components/charts/curve';
+import type { RunAlarm } from '@/shared/contracts/alarms';
 import type { StepRowView } from '@/shared/contracts/runs';
 import { trapezoid } from '@/shared/physics/trapezoid';
 import type { RigDocument } from '@/shared/rig/document';
@@ -50,4 +51,16 @@ function angleAt({ angleStartDeg, angleEndDeg, startUtcMs, endUtcMs }: StepRowVi
 export function neighbourStart(rows: readonly StepRowView[], utcMs: number, by: 1 | -1): number | null {
   const starts = rows.map(({ startUtcMs }) => startUtcMs);
   return (by === 1 ? starts.find((start) => start > utcMs + 1) : starts.findLast((start) => start < utcMs - 1)) ?? null;
+}
+
+export type AlarmMoment = 'to come' | 'now' | 'over';
+
+/** A shorter alarm, as of a clock that stepped, is shown for so long, ms: a replay would pass it by unseen. */
+const leastShownMs = 60_000;
+
+/** What an alarm is at an instant; one that is not over yet stands to the end. */
+export function alarmMoment({ raisedAt, untilAt }: Pick<RunAlarm, 'raisedAt' | 'untilAt'>, utcMs: number): AlarmMoment {
+  const raisedUtcMs = Date.parse(raisedAt);
+  if (utcMs < raisedUtcMs) return 'to come';
+  return untilAt === null || utcMs < Math.max(Date.parse(untilAt), raisedUtcMs + leastShownMs) ? 'now' : 'over';
 }

@@ -8,12 +8,16 @@ import { reducedMotion } from '@/components/charts/use-smooth-angle';
 import { toRad } from '@/components/runs/deflection-series';
 import { stepTitle } from '@/components/runs/run-words';
 import { Body, Button, Empty, IconButton, Label, Loading, Num, Panel, ProblemNotice, Screen, Tabs, useWide } from '@/components/ui';
-import { readSamples } from '@/shared/contracts/data';
+import { TextLink } from '@/components/runs/recent-steps';
+import { listRunAlarms, type RunAlarm } from '@/shared/contracts/alarms';
+import { readSamples, type ChannelView } from '@/shared/contracts/data';
 import { getRun, listSteps, type RunView, type StepRowView } from '@/shared/contracts/runs';
 import { formatDeflection, formatDegrees } from '@/shared/lib/format-angle';
 import { formatClock, zoneName } from '@/shared/lib/format-time';
 import { momentAt, neighbourStart } from './moment';
+import { ReplayAlarms, StandingAlarms } from './replay-alarms';
 import { ReplayCamera } from './replay-camera';
+import { ReplaySurroundings } from './replay-surroundings';
 import { TimeSlider } from './time-slider';
 import { usePlayer } from './use-player';
 
@@ -45,7 +49,7 @@ export function ReplayScreen() {
       ) : rows.length === 0 ? (
         <Empty title="Nothing to replay yet">The run has not begun its first step.</Empty>
       ) : (
-        <Night view={view} rows={rows} measured={measured} startUtcMs={startUtcMs} />
+        <Night view={view} rows={rows} measured={measured} channels={data?.channels ?? []} startUtcMs={startUtcMs} />
       )}
     </Screen>
   );
@@ -55,8 +59,13 @@ interface NightProps {
   view: RunView;
   rows: readonly StepRowView[];
   measured: Series | null;
+  channels: readonly ChannelView[];
   startUtcMs: number | null;
 }
+
+const noAlarms: readonly RunAlarm[] = [];
+
+const isoSecond = (utcMs: number) => new Date(Math.floor(utcMs / 1000) * 1000).toISOString();
 
 type Pace = '20' | '60' | '180';
 const paces: { value: Pace; label: string }[] = [
@@ -65,10 +74,11 @@ const paces: { value: Pace; label: string }[] = [
   { value: '20', label: 'in 20 s' },
 ];
 
-function Night({ view, rows, measured, startUtcMs }: NightProps) {
+function Night({ view, rows, measured, channels, startUtcMs }: NightProps) {
   const { timeZone } = useLab();
   const wide = useWide();
   const frames = useFrames(view.id);
+  const alarms = useLabQuery(listRunAlarms, { params: { runId: view.id }, enabled: !view.rehearsal }).data?.data.items ?? noAlarms;
   const [pace, setPace] = useState<Pace>('60');
   const strip = useMemo(() => stepsOfLog(rows), [rows]);
   const fromUtcMs = strip[0]?.startUtcMs ?? 0;
@@ -77,8 +87,14 @@ function Night({ view, rows, measured, startUtcMs }: NightProps) {
   const strideMs = Math.max(1, (toUtcMs - fromUtcMs) / 1000);
   const jump = useMemo(() => (reducedMotion() ? (utcMs: number) => neighbourStart(rows, utcMs, 1) : null), [rows]);
   const { atUtcMs, playing, toggle, go } = usePlayer({ fromUtcMs, toUtcMs, startUtcMs, wholeS: Number(pace), jump });
+  const shownUtcMs = fromUtcMs + strideMs * Math.floor((atUtcMs - fromUtcMs) / strideMs);
+  const around = useMemo(() => channels.filter(({ role }) => role === 'environment'), [channels]);
   const { row, between, angleDeg, rad } = momentAt({ rows, measured, rig: view.rig }, atUtcMs);
-  const link = (utcMs: number) => router.setParams({ at: new Date(Math.floor(utcMs / 1000) * 1000).toISOString() });
+  const marks = useMemo(
+    () => alarms.map(({ raisedAt }) => Date.parse(raisedAt)).filter((raised) => raised >= fromUtcMs && raised <= toUtcMs),
+    [alarms, fromUtcMs, toUtcMs],
+  );
+  const link = (utcMs: number) => router.setParams({ at: isoSecond(utcMs) });
   const step = (by: 1 | -1) => go(neighbourStart(rows, atUtcMs, by) ?? (by === 1 ? toUtcMs : fromUtcMs));
   return (
     <View className="gap-4">
@@ -99,6 +115,7 @@ function Night({ view, rows, measured, startUtcMs }: NightProps) {
             <Label>
               deflection <Num size={13}>{formatDeflection(rad)}</Num>
             </Label>
+            <StandingAlarms alarms={alarms} atUtcMs={atUtcMs} />
           </View>
         </Panel>
         <ReplayCamera runId={view.id} frames={frames} atUtcMs={atUtcMs} />
@@ -109,10 +126,11 @@ function Night({ view, rows, measured, startUtcMs }: NightProps) {
           timeZone={timeZone}
           title={`${view.rigName}, the whole run`}
           measured={measured}
-          nowUtcMs={fromUtcMs + strideMs * Math.floor((atUtcMs - fromUtcMs) / strideMs)}
+          nowUtcMs={shownUtcMs}
           heightPx={wide ? 190 : 140}
         />
-        <TimeSlider {...{ fromUtcMs, toUtcMs, atUtcMs, timeZone }} onChange={go} onStep={step} />
+        <ReplaySurroundings runId={view.id} channels={around} fromUtcMs={fromUtcMs} toUtcMs={toUtcMs} atUtcMs={shownUtcMs} />
+        <TimeSlider {...{ fromUtcMs, toUtcMs, atUtcMs, timeZone, marks }} onChange={go} onStep={step} />
         <View className="flex-row items-center justify-between gap-2">
           <IconButton icon="back" label="Previous step" onPress={() => step(-1)} testID="replay-previous" />
           <Button icon={playing ? 'hold' : 'start'} label={playing ? 'Pause' : 'Play'} onPress={toggle} testID="replay-play" />
@@ -121,7 +139,11 @@ function Night({ view, rows, measured, startUtcMs }: NightProps) {
         <Tabs label="The whole night" value={pace} onChange={setPace} options={paces} testID="replay-pace" />
         {jump === null ? null : <Label>Motion is reduced on this device: it goes from step to step, one a second.</Label>}
       </Panel>
-      <Button kind="quiet" icon="mark" label="Put this moment into the address" onPress={() => link(atUtcMs)} testID="replay-link" />
+      <ReplayAlarms alarms={alarms} atUtcMs={atUtcMs} onGo={go} />
+      <View className="flex-row flex-wrap items-center gap-x-3">
+        <Button kind="quiet" icon="mark" label="Put this moment into the address" onPress={() => link(atUtcMs)} testID="replay-link" />
+        <TextLink href={`/runs/${view.id}/data?at=${isoSecond(atUtcMs)}`} label="The data at this moment" />
+      </View>
     </View>
   );
 }

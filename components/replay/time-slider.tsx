@@ -1,5 +1,6 @@
 import { useState } from 'react';
 import { View, type GestureResponderEvent } from 'react-native';
+import { Icon } from '@/components/ui';
 import { formatClock } from '@/shared/lib/format-time';
 
 interface TimeSliderProps {
@@ -7,6 +8,8 @@ interface TimeSliderProps {
   toUtcMs: number;
   atUtcMs: number;
   timeZone: string;
+  /** Instants that are marked over it: alarms. */
+  marks: readonly number[];
   onChange: (utcMs: number) => void;
   /** Page up and page down: to the next or the previous step. */
   onStep: (by: 1 | -1) => void;
@@ -16,7 +19,7 @@ interface TimeSliderProps {
 const keyPresses = 200;
 
 /** The time of a night under the thumb, 48 px high; by keys as well. */
-export function TimeSlider({ fromUtcMs, toUtcMs, atUtcMs, timeZone, onChange, onStep }: TimeSliderProps) {
+export function TimeSlider({ fromUtcMs, toUtcMs, atUtcMs, timeZone, marks, onChange, onStep }: TimeSliderProps) {
   const [width, setWidth] = useState(1);
   const spanMs = Math.max(1, toUtcMs - fromUtcMs);
   const share = (atUtcMs - fromUtcMs) / spanMs;
@@ -63,6 +66,16 @@ export function TimeSlider({ fromUtcMs, toUtcMs, atUtcMs, timeZone, onChange, on
       <View pointerEvents="none" className="h-2 rounded-full bg-panel2">
         <View className="h-2 rounded-full bg-lamp" style={{ width: `${100 * share}%` }} />
       </View>
+      {marks.map((utcMs) => (
+        <View
+          key={utcMs}
+          pointerEvents="none"
+          className="absolute top-0"
+          style={{ left: `${(100 * (utcMs - fromUtcMs)) / spanMs}%`, marginLeft: -7 }}
+        >
+          <Icon name="warning" size={14} tone="danger" />
+        </View>
+      ))}
       <View pointerEvents="none" className="absolute h-6 w-6 rounded-full bg-lamp" style={{ left: `${100 * share}%`, marginLeft: -12 }} />
     </View>
   );

@@ -1,4 +1,5 @@
 import { demoIds } from '@/db/demo/seed';
+import { reportCondition } from '@/server/store/alarms';
 import type { ExclusionView } from '@/shared/contracts/exclusions';
 import type { RunView } from '@/shared/contracts/runs';
 import { sizes, type Size } from '../support/browser';
@@ -41,6 +42,10 @@ beforeAll(async () => {
     body: lines.join('\n'),
   });
   expect(await sent.json()).toMatchObject({ stored: lines.length });
+  const { database } = lab().server.services;
+  const place = { labId: demoIds.lab, rigId: demoIds.rig, code: 'clock-stepped' as const, subject: 'host' };
+  const found = { met: true, words: 'The clock of the server jumped by 1200 ms.', runId, utcMs: night.from + 840_000 };
+  await database.db.transaction((tx) => reportCondition(tx, place, found));
 }, 120_000);
 
 const exclusionsOf = async () => ((await read(lab(), `${runId}/exclusions`)) as { items: ExclusionView[] }).items;
@@ -185,6 +190,38 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     // Five presses of a hundredth of what is shown.
     expect((Number(made?.endUtcMs) - Number(made?.startUtcMs)) / (night.to - night.from)).toBeCloseTo(0.05, 2);
     await hand.asks('POST', `/exclusions/${made?.id ?? ''}/withdraw`, { body: { reason: 'the end of the test' } });
+  });
+
+  chapter('from a moment of the data to the same moment of the replay, where the room goes along with the time', async () => {
+    await hand.goes(`/runs/${runId}/data?at=${new Date(night.from + 300_000).toISOString()}`, 'channel-plot');
+    await hand.tapsOn('This moment in the replay', 'link');
+    await hand.at('replay-screen').waitFor();
+    const clock = await hand.reads('replay-clock');
+    expect(await hand.page.getByTestId('replay-alarm').count()).toBe(0);
+    const temperature = await hand.reads('replay-surrounding-box temperature', /19\.\d+ °C/);
+    // A finger on the slider: another moment, another temperature.
+    await new Thumb(hand).taps(hand.at('time-slider'), 0.8);
+    expect(await hand.readsOther('replay-clock', clock)).toMatch(/^\d\d:\d\d:\d\d$/);
+    await hand.readsOther('replay-surrounding-box temperature', temperature);
+    // At the beginning, before the first sample, it says that there is none or what it was; keys move on from there.
+    await hand.at('time-slider').focus();
+    await hand.page.keyboard.press('Home');
+    await hand.reads('replay-surrounding-air pressure', /no data|1013\.\d+ hPa/);
+  });
+
+  chapter('alarms are marked on the night, lead to their moment, and stand as long as they stood', async () => {
+    await hand.reads('replay-alarms', /Clock stepped.*, to come/);
+    await hand.taps('replay-alarm-row');
+    await hand.reads('replay-alarm', 'Clock stepped');
+    await hand.reads('replay-alarms', /, at this moment/);
+    await hand.at('time-slider').focus();
+    await hand.page.keyboard.press('Home');
+    await hand.reads('replay-alarms', /, to come/);
+    await hand.at('replay-alarm').waitFor({ state: 'detached' });
+    await hand.shootsThemes('replay-room', async () => {
+      await hand.goes(`/runs/${runId}/replay?at=${new Date(night.from + 850_000).toISOString()}`, 'replay-alarm');
+      await hand.reads('replay-surrounding-box temperature', /°C/);
+    });
   });
 
   chapter('it is looked at in every theme', async () => {

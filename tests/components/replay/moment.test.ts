@@ -1,4 +1,4 @@
-import { momentAt, neighbourStart } from '@/components/replay/moment';
+import { alarmMoment, momentAt, neighbourStart } from '@/components/replay/moment';
 import type { StepRowView } from '@/shared/contracts/runs';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 
@@ -52,4 +52,23 @@ test('from step to step, and no further than the run', () => {
   expect(neighbourStart(rows, 121_000, -1)).toBe(21_000);
   expect(neighbourStart(rows, 130_000, 1)).toBeNull();
   expect(neighbourStart(rows, 1000, -1)).toBeNull();
+});
+
+test('an alarm is to come, stands from the moment it was raised, and is over once it went; one that has no end stands to the end', () => {
+  const raisedAt = '2031-02-14T22:10:00.000Z';
+  const untilAt = '2031-02-14T22:12:00.000Z';
+  const [raised, until] = [Date.parse(raisedAt), Date.parse(untilAt)];
+  expect([raised - 1, raised, until - 1, until].map((utcMs) => alarmMoment({ raisedAt, untilAt }, utcMs))).toEqual([
+    'to come',
+    'now',
+    'now',
+    'over',
+  ]);
+  expect(alarmMoment({ raisedAt, untilAt: null }, until + 1e9)).toBe('now');
+  // One that was over as soon as it was raised is shown for a minute.
+  expect([0, 59_999, 60_000].map((afterMs) => alarmMoment({ raisedAt, untilAt: raisedAt }, raised + afterMs))).toEqual([
+    'now',
+    'now',
+    'over',
+  ]);
 });
