@@ -5,7 +5,7 @@ import { occurrencesBetween, type Occurrence } from '@/shared/schedule/occurrenc
 import { openHours, type RoomHours } from '@/shared/schedule/plan';
 import { againstRoom, type Stay } from '@/shared/schedule/room';
 import type { Handle } from '../store/database';
-import { listRigs, type RigRecord } from '../store/rigs';
+import { findRig, listRigs, type RigRecord } from '../store/rigs';
 import { allSchedules, hoursOfRooms, startsBetween, type ScheduleRecord, type StartRow } from '../store/schedules';
 import { isoOf, isoOrNull } from './maker';
 
@@ -54,11 +54,14 @@ export interface CalendarSpan {
 /** Every start of a lab in a span: what became of those that were due, and what stands against those to come. */
 export async function calendarOf(db: Handle, span: CalendarSpan): Promise<CalendarItem[]> {
   const { labId, timeZone, fromUtcMs, untilUtcMs, rigId } = span;
-  const schedules = (await allSchedules(db, labId)).filter((schedule) => rigId === undefined || schedule.rigId === rigId);
-  const rigs = new Map((await listRigs(db, labId)).map((rig) => [rig.id, rig]));
-  const rooms = await hoursOfRooms(db, labId);
+  const schedules = await allSchedules(db, { labId, rigId });
+  if (schedules.length === 0) return [];
+  const known = rigId === undefined ? await listRigs(db, labId) : [await findRig(db, labId, rigId)].filter((rig) => rig !== null);
+  const rigs = new Map(known.map((rig) => [rig.id, rig]));
+  const rooms = await hoursOfRooms(db, { labId, rigId });
+  const scheduleIds = schedules.map(({ id }) => id);
   const decided = new Map<string, StartRow>();
-  for (const row of await startsBetween(db, labId, { fromUtcMs, toUtcMs: untilUtcMs }))
+  for (const row of await startsBetween(db, labId, { scheduleIds, fromUtcMs, toUtcMs: untilUtcMs }))
     decided.set(startKey(row.scheduleId, row.dueAt), row);
   const items = schedules.flatMap((schedule) => {
     const rig = rigs.get(schedule.rigId) as RigRecord;

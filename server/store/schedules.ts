@@ -69,9 +69,17 @@ export async function standingSchedules(db: Handle, labId?: string): Promise<Sch
   return rows.map(recordOf);
 }
 
-/** Schedules of a lab, ended ones too: what they started is still in the calendar. */
-export async function allSchedules(db: Handle, labId: string): Promise<ScheduleRecord[]> {
-  const rows = await scheduleQuery(db).where(eq(schedules.labId, labId)).orderBy(asc(schedules.madeAt), asc(schedules.id));
+/** Of one rig alone; without `rigId` of all of the lab. */
+export interface OfLabOrRig {
+  labId: string;
+  rigId?: string | undefined;
+}
+
+/** Schedules of a lab or of one of its rigs, ended ones too: what they started is still in the calendar. */
+export async function allSchedules(db: Handle, { labId, rigId }: OfLabOrRig): Promise<ScheduleRecord[]> {
+  const rows = await scheduleQuery(db)
+    .where(and(eq(schedules.labId, labId), rigId === undefined ? undefined : eq(schedules.rigId, rigId)))
+    .orderBy(asc(schedules.madeAt), asc(schedules.id));
   return rows.map(recordOf);
 }
 
@@ -201,14 +209,20 @@ export async function startsBetween(
 }
 
 /** Hours of the rooms of a lab's rigs, by rig, and since when they are so; a rig without a row has no limits. */
-export async function hoursOfRooms(db: Handle, labId: string): Promise<ReadonlyMap<string, { hours: RoomHours; changedAt: number }>> {
+export async function hoursOfRooms(
+  db: Handle,
+  { labId, rigId: ofRig }: OfLabOrRig,
+): Promise<ReadonlyMap<string, { hours: RoomHours; changedAt: number }>> {
   const { rigId, hours, changedAt } = roomHours;
-  const rows = await db.select({ rigId, hours, changedAt }).from(roomHours).where(eq(roomHours.labId, labId));
+  const rows = await db
+    .select({ rigId, hours, changedAt })
+    .from(roomHours)
+    .where(and(eq(roomHours.labId, labId), ofRig === undefined ? undefined : eq(rigId, ofRig)));
   return new Map(rows.map((row) => [row.rigId, row]));
 }
 
 export async function hoursOfRoom(db: Handle, { labId, rigId }: { labId: string; rigId: string }): Promise<RoomHours> {
-  return (await hoursOfRooms(db, labId)).get(rigId)?.hours ?? openHours;
+  return (await hoursOfRooms(db, { labId, rigId })).get(rigId)?.hours ?? openHours;
 }
 
 export async function setRoomHours(

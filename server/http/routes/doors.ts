@@ -40,8 +40,8 @@ async function onCallOf({ database: { db } }: Services, { labId, rigId }: store.
 async function cardOf(services: Services, door: store.DoorAtAddress): Promise<DoorCard> {
   const { labId, labName, rigId, rigName, timeZone, ring } = door;
   const nowUtcMs = services.clock.utcMs();
-  const span = { labId, timeZone, fromUtcMs: nowUtcMs, untilUtcMs: nowUtcMs + weekMs };
-  const next = (await calendarOf(services.database.db, span)).find((item) => item.rigId === rigId && item.state === 'planned');
+  const span = { labId, rigId, timeZone, fromUtcMs: nowUtcMs, untilUtcMs: nowUtcMs + weekMs };
+  const next = (await calendarOf(services.database.db, span)).find(({ state }) => state === 'planned');
   return {
     ...{ labName, rigName, timeZone, ring, ...(await standOf(services, door)), nextAt: next?.dueAt ?? null },
     onCall: await onCallOf(services, door),
