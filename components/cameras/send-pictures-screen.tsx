@@ -1,10 +1,9 @@
-import { useLocalSearchParams, type Href } from 'expo-router';
+import { useLocalSearchParams } from 'expo-router';
 import { useState } from 'react';
 import { View } from 'react-native';
 import { monotonicMs, useLabMutation, useMay, wordsOf } from '@/components/api';
-import { useRig } from '@/components/rigs/use-rig';
-import { useDeviceCameras } from '@/components/spot/use-device-cameras';
-import { Body, Button, Field, Label, Panel, ProblemNotice, Screen, Section, Select } from '@/components/ui';
+import { CameraChoice, DeviceActs, DeviceScreen } from '@/components/spot/device-screen';
+import { Body, Button, Field, Label, Panel, ProblemNotice, Section } from '@/components/ui';
 import { addCamera } from '@/shared/contracts/cameras';
 import { formatAgo } from '@/shared/lib/format-duration';
 import { isToken } from '@/shared/spot/setting';
@@ -13,28 +12,24 @@ import { useKeptToken, usePictureSender, type SenderPage } from './use-picture-s
 /** A camera of this device looks at the rig: its pictures are sent every few seconds, as long as the page is open. */
 export function SendPicturesScreen() {
   const { rigId } = useLocalSearchParams<{ rigId: string }>();
-  const rig = useRig(rigId).data?.data;
   const [token, keep] = useKeptToken(rigId);
   const page = usePictureSender(token.trim());
   return (
-    <Screen
+    <DeviceScreen
       title="Send pictures"
-      back={{ href: `/rigs/${rigId}` as Href, label: rig?.name ?? 'the rig' }}
+      rigId={rigId}
       testID="send-pictures-screen"
-      footer={<Acts page={page} hasToken={isToken(token)} />}
-      footerGivesWay
+      acts={<Acts page={page} hasToken={isToken(token)} />}
       aside={<TokenPanel rigId={rigId} token={token} onToken={keep} locked={page.view.sending} />}
     >
       <DeviceCamera page={page} />
-    </Screen>
+    </DeviceScreen>
   );
 }
 
 function DeviceCamera({ page: { place, sender, view } }: { page: SenderPage }) {
   const { camera } = view;
-  const cameras = useDeviceCameras(camera.kind);
   const isShown = camera.kind === 'open' || camera.kind === 'opening';
-  const known = cameras.map(({ id, name }) => ({ value: id, label: name }));
   return (
     <Section title="Camera" remark="Point it at the rig. Whoever is a member of the lab sees what it shows, people in the room too.">
       {camera.kind === 'refused' ? <ProblemNotice title="The camera was not opened" detail={camera.why} /> : null}
@@ -42,24 +37,12 @@ function DeviceCamera({ page: { place, sender, view } }: { page: SenderPage }) {
       <View className="w-full max-w-[640px]">
         <Video onVideo={place.set} shown={isShown} />
       </View>
-      <View className="flex-row flex-wrap items-end gap-3">
-        {known.length === 0 ? null : (
-          <View className="min-w-[220px] flex-1">
-            <Select
-              label="Which camera"
-              value={camera.kind === 'open' ? camera.id : ''}
-              options={camera.kind === 'open' ? known : [{ value: '', label: 'Any' }, ...known]}
-              onChange={(id) => void sender.openCamera(id === '' ? null : id)}
-              testID="send-camera"
-            />
-          </View>
-        )}
-        {isShown ? (
-          <Button label="Close the camera" onPress={() => sender.closeCamera()} testID="send-close" />
-        ) : (
-          <Button kind="primary" label="Open the camera" onPress={() => void sender.openCamera(null)} testID="send-open" />
-        )}
-      </View>
+      <CameraChoice
+        state={camera.kind}
+        chosen={camera.kind === 'open' ? camera.id : null}
+        onOpen={(id) => void sender.openCamera(id)}
+        onClose={() => sender.closeCamera()}
+      />
     </Section>
   );
 }
@@ -112,9 +95,14 @@ function TokenPanel(props: { rigId: string; token: string; onToken: (token: stri
 
 function Acts({ page: { sender, view }, hasToken }: { page: SenderPage; hasToken: boolean }) {
   const missing = [view.camera.kind === 'open' ? null : 'open the camera', hasToken ? null : 'add it to the rig, or give its token'];
-  const todo = missing.filter((one) => one !== null);
   return (
-    <View className="gap-2">
+    <DeviceActs
+      sending={view.sending}
+      missing={missing.filter((one) => one !== null)}
+      missingTestID="send-missing"
+      begin={{ label: 'Send a picture every 3 s', onPress: () => sender.begin(), testID: 'send-begin' }}
+      end={{ label: 'Send no more', onPress: () => sender.end(), testID: 'send-end' }}
+    >
       {view.trouble === null ? null : (
         <Body tone="danger" role="status" testID="send-trouble">
           {view.trouble}
@@ -126,23 +114,7 @@ function Acts({ page: { sender, view }, hasToken }: { page: SenderPage; hasToken
             ? 'The first picture is on its way.'
             : `${String(view.sent)} sent, the last ${formatAgo((monotonicMs() - view.sentAtMs) / 1000)}. Leave this page open.`}
         </Body>
-      ) : todo.length > 0 ? (
-        <Body tone="dim" testID="send-missing">
-          Still to do: {todo.join('; ')}.
-        </Body>
       ) : null}
-      {view.sending ? (
-        <Button kind="plain" size="action" label="Send no more" onPress={() => sender.end()} testID="send-end" />
-      ) : (
-        <Button
-          kind="primary"
-          size="action"
-          label="Send a picture every 3 s"
-          disabled={todo.length > 0}
-          onPress={() => sender.begin()}
-          testID="send-begin"
-        />
-      )}
-    </View>
+    </DeviceActs>
   );
 }

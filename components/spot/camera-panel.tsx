@@ -1,18 +1,17 @@
 import { useEffect } from 'react';
 import { View } from 'react-native';
 import { useLab } from '@/components/api';
-import { Body, Button, Icon, Label, Panel, ProblemNotice, Section, Select } from '@/components/ui';
+import { Body, Icon, Label, Panel, ProblemNotice, Section } from '@/components/ui';
 import { formatClock } from '@/shared/lib/format-time';
 import { isSamePicture, usualRegion } from '@/shared/spot/setting';
+import { CameraChoice } from './device-screen';
 import { PictureView } from './picture-view';
 import type { CameraState } from './spot-reader';
-import { useDeviceCameras } from './use-device-cameras';
 import type { SpotPage } from './use-spot-reader';
 
 /** The camera and its picture; the region is drawn in it. */
 export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: number | null; onLine: (px: number) => void }) {
   const { reader, view, setting, change, place } = page;
-  const cameras = useDeviceCameras(view.camera.kind);
   const { picture, spot } = view;
   const isOpen = view.camera.kind === 'open' || view.camera.kind === 'lost';
   const opened = view.camera.kind === 'open' ? view.camera.id : null;
@@ -38,31 +37,13 @@ export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: 
         onRegion={(region) => change({ region, picture, ...(marksFit ? {} : { marks: [] }) })}
         onLine={onLine}
       />
-      <View className="flex-row flex-wrap items-end gap-3">
-        {cameras.length === 0 ? null : (
-          <View className="min-w-[220px] flex-1">
-            <Select
-              label="Which camera"
-              value={setting.cameraId ?? ''}
-              options={optionsOf(cameras, setting.cameraId)}
-              onChange={(id) => open(id === '' ? null : id)}
-              disabled={view.sending}
-              testID="spot-camera"
-            />
-          </View>
-        )}
-        {isOpen ? (
-          <Button label="Close the camera" disabled={view.sending} onPress={() => reader.closeCamera()} testID="close-camera" />
-        ) : (
-          <Button
-            kind="primary"
-            label="Open the camera"
-            busy={view.camera.kind === 'opening'}
-            onPress={() => open(setting.cameraId)}
-            testID="open-camera"
-          />
-        )}
-      </View>
+      <CameraChoice
+        state={view.camera.kind}
+        chosen={setting.cameraId}
+        locked={view.sending}
+        onOpen={open}
+        onClose={() => reader.closeCamera()}
+      />
       {view.camera.kind === 'open' && view.camera.free.length > 0 ? (
         <Label>
           The camera goes on setting by itself: {view.camera.free.join(', ')}. Set it by hand in its own program: each change moves the spot
@@ -71,15 +52,6 @@ export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: 
       ) : null}
     </Section>
   );
-}
-
-/** The cameras to choose from, with the one that was read before, though it may be away. */
-function optionsOf(cameras: readonly { id: string; name: string }[], chosen: string | null) {
-  const options = cameras.map(({ id, name }) => ({ value: id, label: name }));
-  if (chosen === null) return [{ value: '', label: 'Any' }, ...options];
-  return options.some(({ value }) => value === chosen)
-    ? options
-    : [{ value: chosen, label: 'The one of before, which is away' }, ...options];
 }
 
 function CameraNotice({ camera }: { camera: CameraState }) {

@@ -1,12 +1,11 @@
-import { useLocalSearchParams, type Href } from 'expo-router';
+import { useLocalSearchParams } from 'expo-router';
 import { useState } from 'react';
-import { View } from 'react-native';
-import { Body, Button, Screen } from '@/components/ui';
-import { useRig } from '@/components/rigs/use-rig';
+import { Button } from '@/components/ui';
 import { fitScale } from '@/shared/spot/scale';
 import { isSamePicture, isToken, regionFault } from '@/shared/spot/setting';
 import { BlackScreen } from './black-screen';
 import { CameraPanel } from './camera-panel';
+import { DeviceActs, DeviceScreen } from './device-screen';
 import { LivePanel } from './live-panel';
 import { ReadingPanel } from './reading-panel';
 import { ScalePanel } from './scale-panel';
@@ -16,17 +15,15 @@ import { useSpotReader, type SpotPage } from './use-spot-reader';
 /** Reads the light spot on the scale with a camera of this device, all night, into a channel of the rig. */
 export function SpotScreen() {
   const { rigId } = useLocalSearchParams<{ rigId: string }>();
-  const rig = useRig(rigId).data?.data;
   const page = useSpotReader(rigId);
   const [linePx, setLinePx] = useState<number | null>(null);
   const [black, setBlack] = useState(false);
   return (
-    <Screen
+    <DeviceScreen
       title="Read the light spot"
-      back={{ href: `/rigs/${rigId}` as Href, label: rig?.name ?? 'the rig' }}
+      rigId={rigId}
       testID="spot-screen"
-      footer={<Acts page={page} onBlack={() => setBlack(true)} />}
-      footerGivesWay
+      acts={<Acts page={page} onBlack={() => setBlack(true)} />}
       aside={
         <>
           <ReadingPanel page={page} />
@@ -38,7 +35,7 @@ export function SpotScreen() {
       <CameraPanel page={page} linePx={linePx} onLine={setLinePx} />
       <LivePanel view={page.view} />
       {black ? <BlackScreen view={page.view} onClose={() => setBlack(false)} /> : null}
-    </Screen>
+    </DeviceScreen>
   );
 }
 
@@ -60,30 +57,14 @@ function stillToDo({ view, setting }: SpotPage): string[] {
 
 function Acts({ page, onBlack }: { page: SpotPage; onBlack: () => void }) {
   const { view, reader } = page;
-  const missing = stillToDo(page);
   return (
-    <View className="gap-2">
-      {view.sending || missing.length === 0 ? null : (
-        <Body tone="dim" size={13} testID="spot-missing">
-          Still to do: {missing.join('; ')}.
-        </Body>
-      )}
-      <View className="flex-row gap-3">
-        {view.sending ? (
-          <Button size="action" label="End the reading" className="flex-1" onPress={() => reader.end()} testID="end-reading" />
-        ) : (
-          <Button
-            kind="primary"
-            size="action"
-            label="Begin to read"
-            className="flex-1"
-            disabled={missing.length > 0}
-            onPress={() => reader.begin()}
-            testID="begin-reading"
-          />
-        )}
-        <Button size="action" label="Black screen" className="flex-1" onPress={onBlack} testID="go-black" />
-      </View>
-    </View>
+    <DeviceActs
+      sending={view.sending}
+      missing={stillToDo(page)}
+      missingTestID="spot-missing"
+      begin={{ label: 'Begin to read', onPress: () => reader.begin(), testID: 'begin-reading' }}
+      end={{ label: 'End the reading', onPress: () => reader.end(), testID: 'end-reading' }}
+      beside={<Button size="action" label="Black screen" className="flex-1" onPress={onBlack} testID="go-black" />}
+    />
   );
 }

@@ -33,7 +33,7 @@ describe.each(['phone', 'wide'] as const)('%s', (size) => {
     await hand.goes(rig, 'to-send-pictures');
     await hand.taps('to-send-pictures');
     await hand.reads('send-missing', 'Still to do: open the camera; add it to the rig, or give its token.');
-    await hand.taps('send-open');
+    await hand.taps('open-camera');
     await hand.reads('send-missing', 'Still to do: add it to the rig, or give its token.');
     await hand.types('send-name', `Film ${size}`);
     await hand.taps('send-make');

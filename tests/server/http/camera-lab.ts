@@ -3,7 +3,7 @@ import { demoIds } from '@/db/demo/seed';
 import type { CameraView, FrameView } from '@/shared/contracts/cameras';
 import type { StepRowView } from '@/shared/contracts/runs';
 import { LoopbackCamera } from '@/tests/support/camera-on-loopback';
-import type { TestDatabase } from '@/tests/support/database';
+import { databaseOfThisFile, type TestDatabase } from '@/tests/support/database';
 import { LabServer } from '@/tests/support/lab-server';
 
 export const camerasPath = `/labs/${demoIds.lab}/rigs/${demoIds.rig}/cameras`;
@@ -21,7 +21,7 @@ interface Cameras {
 }
 
 /** The demo lab with a camera on loopback that it may ask. */
-export class CameraLab {
+class CameraLab {
   private constructor(
     readonly lab: LabServer,
     readonly camera: LoopbackCamera,
@@ -94,4 +94,17 @@ export class CameraLab {
     }
     throw new Error('it never came to that');
   }
+}
+
+/** The lab of a test file, which every test leaves as the demo has it. */
+export function cameraLabOfThisFile(): () => CameraLab {
+  const database = databaseOfThisFile();
+  let at: CameraLab;
+  jest.setTimeout(60_000);
+  beforeAll(async () => {
+    at = await CameraLab.start(database());
+  }, 60_000);
+  afterAll(() => at.stop());
+  afterEach(() => at.tidy());
+  return () => at;
 }

@@ -3,44 +3,36 @@ import request from 'supertest';
 import { demoIds } from '@/db/demo/seed';
 import type { CameraView, FrameView } from '@/shared/contracts/cameras';
 import { jpegOf } from '@/tests/support/camera-on-loopback';
-import { databaseOfThisFile } from '@/tests/support/database';
 import { quickProtocol } from '@/tests/support/lab-server';
-import { asBytes, CameraLab, camerasPath } from './camera-lab';
+import { asBytes, cameraLabOfThisFile, camerasPath } from './camera-lab';
 
-jest.setTimeout(60_000);
-
-const database = databaseOfThisFile();
-let at: CameraLab;
-beforeAll(async () => {
-  at = await CameraLab.start(database());
-}, 60_000);
-afterAll(() => at.stop());
-afterEach(() => at.tidy());
+const at = cameraLabOfThisFile();
 
 describe('a camera whose pictures are sent', () => {
   const push = (secret: string, body: Buffer, { type = 'image/jpeg', query = '' } = {}) =>
-    request(at.lab.built.app)
+    request(at().lab.built.app)
       .post(`/api/camera-pictures${query}`)
       .set('Authorization', `Bearer ${secret}`)
       .set('Content-Type', type)
       .send(body);
-  const make = async (name: string) => (await at.add({ kind: 'pushed', name }).expect(201)).body as { camera: CameraView; secret: string };
+  const make = async (name: string) =>
+    (await at().add({ kind: 'pushed', name }).expect(201)).body as { camera: CameraView; secret: string };
 
   test('has a token that is shown once and can do nothing else', async () => {
     const { camera: made, secret } = await make('Hand held');
     await push(secret, jpegOf('one'), { query: '?ageS=3' }).expect(204);
-    const view = await at.named('Hand held');
+    const view = await at().named('Hand held');
     // Between 3 s and 3.5 s before the request, by the sender's own word.
-    expect(Date.parse(view?.takenAt ?? '')).toBeCloseTo(at.lab.clock.utcMs() - 3_250, -1);
-    expect(JSON.stringify([view, (await at.lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`)).body])).not.toContain(secret);
-    await request(at.lab.built.app).get(`/api${camerasPath}`).set('Authorization', `Bearer ${secret}`).expect(401);
-    await request(at.lab.built.app)
+    expect(Date.parse(view?.takenAt ?? '')).toBeCloseTo(at().lab.clock.utcMs() - 3_250, -1);
+    expect(JSON.stringify([view, (await at().lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`)).body])).not.toContain(secret);
+    await request(at().lab.built.app).get(`/api${camerasPath}`).set('Authorization', `Bearer ${secret}`).expect(401);
+    await request(at().lab.built.app)
       .post('/api/samples')
       .set('Authorization', `Bearer ${secret}`)
       .set('Content-Type', 'application/x-ndjson')
       .send('{"time_utc": "2031-02-14T20:00:00Z", "value": 1}')
       .expect(401);
-    await at.remove(made.id);
+    await at().remove(made.id);
     expect((await push(secret, jpegOf('two')).expect(401)).body.detail).toMatch(/No camera has this token, or it was removed/);
   });
 
@@ -54,14 +46,14 @@ describe('a camera whose pictures are sent', () => {
     for (let turn = 0; turn < 3; turn += 1) await push(secret, jpegOf('good')).expect(204);
     const flood = await push(secret, jpegOf('flood')).expect(429);
     expect(flood.headers['retry-after']).toBe('10');
-    const picture = await at.lab.as('viewer', 'GET', `${camerasPath}/${made.id}/picture`).buffer(true).parse(asBytes).expect(200);
+    const picture = await at().lab.as('viewer', 'GET', `${camerasPath}/${made.id}/picture`).buffer(true).parse(asBytes).expect(200);
     expect(picture.body).toEqual(jpegOf('good'));
   });
 
   test('gives a moment the picture that came next, and a note where none came in time', async () => {
     const { secret } = await make('By the window');
     await push(secret, jpegOf('long before')).expect(204);
-    const runId = await at.lab.run(
+    const runId = await at().lab.run(
       quickProtocol({
         name: 'Sent',
         steps: [
@@ -72,16 +64,16 @@ describe('a camera whose pictures are sent', () => {
         ],
       }),
     );
-    await at.until(async () => (await at.rowsOf(runId)).some(({ kind }) => kind === 'mark'));
-    await at.lab.advance(3_000);
+    await at().until(async () => (await at().rowsOf(runId)).some(({ kind }) => kind === 'mark'));
+    await at().lab.advance(3_000);
     await push(secret, jpegOf('in time')).expect(204);
-    await at.lab.until(runId, 'finished');
-    await at.lab.advance(15_000);
-    const own = await at.framesOf(runId, 'By the window');
+    await at().lab.until(runId, 'finished');
+    await at().lab.advance(15_000);
+    const own = await at().framesOf(runId, 'By the window');
     expect(own).toMatchObject([
       { note: null, picture: { type: 'image/jpeg' } },
       { note: 'no picture of it came within 10 s', picture: null },
     ]);
-    expect((await at.pictureOf(runId, own[0] as FrameView)).bytes).toEqual(jpegOf('in time'));
+    expect((await at().pictureOf(runId, own[0] as FrameView)).bytes).toEqual(jpegOf('in time'));
   });
 });
