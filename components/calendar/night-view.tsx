@@ -103,6 +103,7 @@ export function StartRow({
           {item.protocolName}
         </Body>
         <Label numberOfLines={1}>{item.rigName}</Label>
+        {item.why === '' ? null : <Label>{item.why}</Label>}
         {item.remark === null ? null : <Label>{item.remark}</Label>}
       </View>
       <Body size={13} tone={mark.tone}>

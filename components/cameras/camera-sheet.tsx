@@ -102,8 +102,14 @@ function Place({ hosts, draft, set, error }: PlaceProps) {
         testID="camera-address"
       />
       <Label testID="camera-hosts">{allowed}</Label>
-      <Field label="Name at the camera" value={draft.userName} onChange={set('userName')} hint="Empty where it asks for none." />
-      <Field label="Password" type="password" value={draft.password} onChange={set('password')} testID="camera-password" />
+      <View className="gap-4 wide:flex-row">
+        <View className="min-w-0 wide:flex-1">
+          <Field label="Name at the camera" value={draft.userName} onChange={set('userName')} hint="Empty where it asks for none." />
+        </View>
+        <View className="min-w-0 wide:flex-1">
+          <Field label="Password" type="password" value={draft.password} onChange={set('password')} testID="camera-password" />
+        </View>
+      </View>
       <Label>The password goes to the camera and is never shown again. Without TLS it crosses the network readable.</Label>
     </View>
   );

@@ -30,7 +30,7 @@ export function TorquePlot({ facts }: { facts: StationsFacts }) {
     x: [fromDeg, fromDeg + 180] as [number, number],
     y: roomy(
       drawn.map(({ torqueNm }) => torqueNm * PICO),
-      0.12,
+      0.2,
     ),
   };
   const map = mapInto(box, scale);
@@ -88,31 +88,47 @@ export function TorquePlot({ facts }: { facts: StationsFacts }) {
 }
 
 function Stations({ facts, map, fromDeg, colors }: { facts: StationsFacts; map: Mapped; fromDeg: number; colors: ThemeColors }) {
+  const highNm = Math.abs(facts.greatest.torqueNm);
   return (
     <G>
       {marksOf(facts, fromDeg).map(({ name, angleDeg, torqueNm }) => {
         const lane = laneOf(name);
         const color = lane === 'near' ? colors.near : lane === 'far' ? colors.far : colors.dim;
         const [x, y] = [map.toX(angleDeg), map.toY(torqueNm * PICO)];
-        const anchor = angleDeg < fromDeg + 15 ? 'start' : angleDeg > fromDeg + 165 ? 'end' : 'middle';
+        const place = labelPlace({ angleDeg, torqueNm, fromDeg, highNm });
         return (
           <G key={name}>
             <Circle cx={x} cy={y} r={5} fill={color} stroke={colors.ink} strokeWidth={1.5} />
-            <SvgText
-              x={x}
-              y={torqueNm < 0 ? y + 20 : y - 10}
-              textAnchor={anchor}
-              fontSize={13}
-              fontFamily="Atkinson Hyperlegible Next"
-              fill={colors.text}
-            >
-              {name}
-            </SvgText>
+            {/* The ground comes first, wider: neither the curve nor the dashed line runs through a name. */}
+            {[colors.ink, 'none'].map((halo) => (
+              <SvgText
+                key={halo}
+                x={x + place.dx}
+                y={y + place.dy}
+                textAnchor={place.anchor}
+                fontSize={13}
+                fontFamily="Atkinson Hyperlegible Next"
+                fill={halo === 'none' ? colors.text : halo}
+                stroke={halo}
+                strokeWidth={halo === 'none' ? 0 : 5}
+                strokeLinejoin="round"
+              >
+                {name}
+              </SvgText>
+            ))}
           </G>
         );
       })}
     </G>
   );
+}
+
+/** Above what turns the pendulum one way, below what turns it the other; beside the curve where it runs steeply through nothing, px. */
+function labelPlace({ angleDeg, torqueNm, fromDeg, highNm }: { angleDeg: number; torqueNm: number; fromDeg: number; highNm: number }) {
+  if (angleDeg < fromDeg + 15) return { anchor: 'start', dx: 4, dy: torqueNm < 0 ? 20 : -10 } as const;
+  if (angleDeg > fromDeg + 165) return { anchor: 'end', dx: -4, dy: torqueNm < 0 ? 20 : -10 } as const;
+  if (Math.abs(torqueNm) < 0.1 * highNm) return { anchor: 'end', dx: -12, dy: -8 } as const;
+  return { anchor: 'middle', dx: 0, dy: torqueNm < 0 ? 20 : -10 } as const;
 }
 
 /** Stations as they fall into the half turn shown; of those at one angle the first named. */

@@ -1,3 +1,4 @@
+import { inputWords } from '../evaluation/input-words';
 import type { Finding } from '../protocol/finding';
 import type { RigDocument } from '../rig/document';
 import { excursionFindings, nearLimitAdvice } from './excursion';
@@ -23,7 +24,7 @@ function geometryDecides(predicted: PredictedU | null): Finding[] {
     {
       code: 'geometry-decides',
       path: null,
-      message: `The dwells leave ${percent(statistics)} of G open, ${source} alone ${percent(u)}. More dwells do not help; measure ${source} better.`,
+      message: `The dwells leave ${percent(statistics)} of G open, one input alone ${percent(u)}: ${inputWords(source)} (${source}). More dwells do not help; measure it better.`,
     },
   ];
 }

@@ -103,7 +103,11 @@ describe('a whole night', () => {
     expect(cadence.calibrations.map(({ lengthS }) => lengthS)).toEqual([1680, 1680]);
     for (const { amplitudeRad } of cadence.calibrations) expect(relativeDifference(amplitudeRad, 2e-3)).toBeLessThan(0.01);
     expect(adviseNight(demoRigWide, { predicted: predictU(demoRigWide, cadence), peakRad: 1e-3 })).toEqual([
-      { code: 'geometry-decides', path: null, message: expect.stringContaining('measure sources.orbit better') as string },
+      {
+        code: 'geometry-decides',
+        path: null,
+        message: expect.stringContaining('orbit of the sources (sources.orbit). More dwells do not help; measure it better') as string,
+      },
     ]);
   });
 
