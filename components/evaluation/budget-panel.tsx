@@ -85,7 +85,7 @@ function BudgetRow({ line, unit, wide }: { line: BudgetLine; unit: string; wide:
       {together ? null : (
         <Label className={wide ? 'block text-right' : 'block'}>
           ∂G/∂input <Num size={13}>{scientific(line.sensitivity)}</Num> {UNIT_OF_G}
-          {unit === '' ? '' : ` per ${unitSign(unit)}`}
+          {unit === '' ? '' : ` per\u00a0${unitSign(unit)}`}
         </Label>
       )}
     </>

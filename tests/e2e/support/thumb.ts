@@ -11,9 +11,9 @@ export class Thumb {
     else await this.hand.page.mouse.click(x, y);
   }
 
-  async strokes(plot: Locator, from: number, to: number): Promise<void> {
+  async strokes(plot: Locator, from: number, to: number, count = 5): Promise<void> {
     const ends = [await this.point(plot, from), await this.point(plot, to)] as const;
-    const steps = [0.2, 0.4, 0.6, 0.8, 1].map((part) => ({ x: ends[0].x + part * (ends[1].x - ends[0].x), y: ends[0].y }));
+    const steps = Array.from({ length: count }, (_, k) => ({ x: ends[0].x + ((k + 1) / count) * (ends[1].x - ends[0].x), y: ends[0].y }));
     const { page } = this.hand;
     if (this.hand.browser.size === 'wide') {
       await page.mouse.move(ends[0].x, ends[0].y);
