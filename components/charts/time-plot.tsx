@@ -5,8 +5,10 @@ import { curveSegments, extent, pathOf } from './curve';
 import type { TimePlotProps } from './time-plot-types';
 import { useWidth } from './use-width';
 
-/** The plain picture, for places without a canvas: line, exclusions, marked stretch and cursor, moved by the buttons alone. */
-export function TimePlot({ utcMs, value, title, view, gapMs, excluded, marked, heightPx = 260, testID }: TimePlotProps) {
+const bandPx = 8;
+
+/** The plain picture, for places without a canvas: line, stands, exclusions, marked stretch and cursor, moved by the buttons alone. */
+export function TimePlot({ utcMs, value, title, view, gapMs, bands, excluded, marked, heightPx = 260, testID }: TimePlotProps) {
   const { colors } = useTheme();
   const { width, onLayout } = useWidth();
   const series = { x: utcMs, y: value };
@@ -18,6 +20,18 @@ export function TimePlot({ utcMs, value, title, view, gapMs, excluded, marked, h
   return (
     <View onLayout={onLayout} role="img" aria-label={title} style={{ height: heightPx }} testID={testID}>
       <Svg width={width} height={heightPx}>
+        {(bands ?? []).map(({ lane, fromUtcMs, toUtcMs }) =>
+          lane === 'other' || toUtcMs < fromX || fromUtcMs > toX ? null : (
+            <Rect
+              key={fromUtcMs}
+              x={xToPx(fromUtcMs)}
+              y={lane === 'near' ? 0 : heightPx - bandPx}
+              width={Math.max(1, xToPx(toUtcMs) - xToPx(fromUtcMs))}
+              height={bandPx}
+              fill={lane === 'near' ? colors.near : colors.far}
+            />
+          ),
+        )}
         {stretches.map(({ from, to, opacity }) => (
           <Rect
             key={`${from} ${to}`}

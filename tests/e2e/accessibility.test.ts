@@ -88,6 +88,7 @@ function places(): Place[] {
     { name: 'replay', path: `/runs/${finishedId}/replay`, arrives: 'replay-screen' },
     { name: 'step-log', path: `/runs/${finishedId}/log`, arrives: 'step-log', first: opened('events-3', 'chain-head') },
     { name: 'data', path: `/runs/${finishedId}/data`, arrives: 'data-screen', first: says('kept-files', 'night.csv') },
+    { name: 'marking', path: `/runs/${finishedId}/data`, arrives: 'channel-plot', first: opened('mark', 'marking') },
     { name: 'import', path: `/runs/${finishedId}/import`, arrives: 'import-screen', first: says('unfinished', 'another.csv') },
     {
       name: 'findings',
