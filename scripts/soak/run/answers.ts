@@ -116,11 +116,14 @@ export class Answers {
     if (asked.act === 'stop' && world.over && world.state === 'stopped') return iso(world.machineClock.utcMs());
     const driver = await this.takenUp();
     if (asked.act === 'resume') return this.resume(driver, asked);
-    const answer = asked.act === 'stop' ? driver.stop(asked.by, asked.key) : driver.hold(asked.by, asked.key);
+    const act = asked.act === 'stop' ? 'stop' : 'hold';
+    // A repeat of what the log has already rests on what it came to then.
+    const isRepeat = world.store.events.some(({ kind, data }) => kind === `${act}-requested` && data['by'] === asked.by);
+    const answer = driver[act](asked.by, asked.key);
     const serverAt = await this.accepted(answer);
     if (!this.isStill(process)) return serverAt;
-    world.witness.halts.push({ kind: asked.act === 'stop' ? 'stop' : 'hold', atMs: world.nowMs });
-    world.witness.acknowledged.push({ act: asked.act === 'stop' ? 'stop' : 'hold', by: asked.by });
+    if (!isRepeat) world.witness.halts.push({ kind: act, atMs: world.nowMs });
+    world.witness.acknowledged.push({ act, by: asked.by });
     return serverAt;
   }
 
