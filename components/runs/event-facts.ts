@@ -18,12 +18,17 @@ const names: Record<string, string> = {
   sha256: 'SHA-256',
 };
 
+/** As the tests of a proof have them. */
+const hasWords = (item: unknown): item is { words: string } =>
+  typeof item === 'object' && item !== null && typeof (item as { words?: unknown }).words === 'string';
+
 function valueWords(name: string, value: unknown): string {
   if (typeof value === 'number') {
     if (name.endsWith('S')) return value < 60 ? `${value.toFixed(1)} s` : formatDuration(value);
     if (name.endsWith('Deg')) return formatDegrees(value, name === 'angleDeg' ? 2 : 3);
   }
   if (typeof value === 'boolean') return value ? 'yes' : 'no';
+  if (Array.isArray(value) && value.length > 0 && value.every(hasWords)) return value.map(({ words }) => words).join('; ');
   return typeof value === 'object' ? JSON.stringify(value) : String(value);
 }
 

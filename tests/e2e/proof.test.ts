@@ -56,7 +56,10 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await passToProof(1);
     const { startedAt } = (await read(lab(), runId)) as { startedAt: string };
     const [first] = await proofs();
-    expect(first?.data).toMatchObject({ sound: true, tests: expect.arrayContaining([expect.objectContaining({ test: 'period', ok: true })]) });
+    expect(first?.data).toMatchObject({
+      sound: true,
+      tests: expect.arrayContaining([expect.objectContaining({ test: 'period', ok: true })]),
+    });
     expect(Date.parse(first?.at ?? '') - Date.parse(startedAt)).toBeLessThan(HALF_HOUR_MS);
     await hand.goes(`/runs/${runId}`, 'run-screen');
     await hand.reads('run-state', /Swing|Dwell/);
@@ -90,6 +93,9 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     expect((await proofs()).map(({ data }) => data['sound'])).toEqual([true, false]);
     await hand.goes(`/runs/${runId}/log`, 'step-log');
     await hand.sees(/with a limit that no pair keeps/);
+    await hand.taps('events-6');
+    await hand.sees(/sound yes .*tests near lies on its side of far; near minus far/);
+    await hand.at('events-6').scrollIntoViewIfNeeded();
     await hand.shoots('log');
   });
 });

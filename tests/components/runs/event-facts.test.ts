@@ -19,3 +19,13 @@ test('an edge that was never told is said not to be measured, with how far it ma
   expect(eventWords('edge-not-told')).toContain('Not measured');
   expect(eventFacts({ seq: 4, path: '4.swing', edge: 'began', spanS: 7.01 })).toBe('motion began · somewhere within 7.0 s');
 });
+
+test('the tests of a proof are read as their words', () => {
+  const tests = [
+    { test: 'sign', ok: true, words: 'near lies on its side of far' },
+    { test: 'period', ok: null, words: 'the period cannot be told' },
+  ];
+  expect(eventFacts({ seq: 6, path: '6.proof', sound: false, tests })).toBe(
+    'sound no · tests near lies on its side of far; the period cannot be told',
+  );
+});
