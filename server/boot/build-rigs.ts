@@ -178,7 +178,7 @@ function heedLinks(
   return (station: RigStation, event: LinkEvent): void => {
     const wasKnown = known.get(station.rigId) ?? false;
     const wasArmed = arms.armOf(station.rigId) !== null;
-    const why = endOfArm(event, { wasKnown, armedBootId: arms.armOf(station.rigId)?.bootId ?? null });
+    const why = endOfArm(event, { wasKnown, arm: arms.armOf(station.rigId) });
     known.set(station.rigId, knownAfter(event, wasKnown));
     if (why !== null) arms.end(station, why, engineItself);
     if (event.kind === 'clock-stepped') log.warn({ rigId: station.rigId, clock: event.clock, byMs: event.byMs }, 'a clock stepped');

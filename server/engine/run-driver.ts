@@ -96,7 +96,7 @@ export class RunDriver {
     const open = openMotions(this.snapshot);
     link.takeUp(open);
     const controller = open.length > 0 ? null : readyController(link);
-    if (controller !== null) this.heard({ kind: 'ready', at: this.now(), controller, sameBoot: true });
+    if (controller !== null) this.heard({ kind: 'ready', at: this.now(), controller, sameBoot: true, unheard: null });
     this.timers.keepAlive();
   }
 

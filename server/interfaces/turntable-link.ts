@@ -71,8 +71,22 @@ export type TeachOutcome =
 
 export type MotionEndCause = 'done' | 'hold' | 'stop' | 'interlock' | 'supply' | 'lease' | 'limit' | 'reset';
 
+/** An interlock that was opened, a supply that was lost or an arm key that was turned off while no server listened, UTC ms. */
+export interface UnheardOpening {
+  input: 'interlock' | 'supply' | 'arm-key';
+  utcMs: number;
+}
+
 export type LinkEvent =
-  | { kind: 'ready'; at: Instant; controller: ControllerState; /** same boot id as before the line was lost */ sameBoot: boolean }
+  | {
+      kind: 'ready';
+      at: Instant;
+      controller: ControllerState;
+      /** same boot id as before the line was lost */
+      sameBoot: boolean;
+      /** The last that this start of the controller remembers of before anybody here listened; null: it remembers none. */
+      unheard: UnheardOpening | null;
+    }
   | { kind: 'lost'; at: Instant; why: string }
   | { kind: 'refused-controller'; at: Instant; why: string }
   | { kind: 'accepted'; at: Instant; commandId: string }

@@ -42,10 +42,6 @@ export class CommandBook {
     this.enter(motion, { life: { phase: 'uncertain' }, takenUp: true, compose });
   }
 
-  get holdsTakenUp(): boolean {
-    return this.commands.some(({ takenUp }) => takenUp);
-  }
-
   /** The controller is at rest and all that it keeps is read: of what it has not told by now it knows nothing. */
   dropTakenUp(): void {
     this.commands = this.commands.filter(({ takenUp }) => !takenUp);

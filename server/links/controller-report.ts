@@ -1,6 +1,6 @@
-import { FLAG, type EventMessage, type MachineState, type OkBody, type Reply } from '@/firmware-protocol/codec';
+import { FLAG, type EventMessage, type Happening, type MachineState, type OkBody, type Reply } from '@/firmware-protocol/codec';
 import type { RigMotion } from '@/shared/rig/document';
-import type { ControllerState } from '../interfaces/turntable-link';
+import type { ControllerState, UnheardOpening } from '../interfaces/turntable-link';
 import { degOfSteps } from './rig-units';
 
 /** The controller's state as last told: by a reply, then by the events after it. */
@@ -15,6 +15,8 @@ export class ControllerReport {
   dropped: number | null = null;
   /** Whether anything was told yet. */
   known = false;
+  /** The last of what lets somebody in, or loses the position, that happened before anybody here listened. */
+  private pastOpening: { input: UnheardOpening['input']; atUs: number } | null = null;
 
   constructor(private readonly rig: RigMotion) {}
 
@@ -23,6 +25,7 @@ export class ControllerReport {
     this.event = 0;
     this.atUs = 0;
     this.dropped = null;
+    this.pastOpening = null;
   }
 
   /** A reply that is older than what is known changes nothing. */
@@ -38,7 +41,9 @@ export class ControllerReport {
   }
 
   /** An event that the last reply had not seen yet. */
-  takeEvent({ number, atUs, what }: EventMessage): void {
+  takeEvent({ number, atUs, what }: EventMessage, { isPast }: { isPast: boolean }): void {
+    const input = isPast ? inputOf(what) : null;
+    if (input !== null) this.pastOpening = { input, atUs };
     if (number <= this.event) return;
     this.event = number;
     this.atUs = Math.max(this.atUs, atUs);
@@ -84,6 +89,12 @@ export class ControllerReport {
     return position === null ? null : degOfSteps(this.rig, position);
   }
 
+  /** By the time that has passed on the controller's own clock; `nowUtcMs` is late by what passed since its last reply, half a second at most. */
+  unheard(nowUtcMs: number): UnheardOpening | null {
+    const { pastOpening, atUs } = this;
+    return pastOpening === null ? null : { input: pastOpening.input, utcMs: nowUtcMs - (atUs - pastOpening.atUs) / 1000 };
+  }
+
   view(bootId: string, firmware: string): ControllerState | null {
     if (!this.known) return null;
     return {
@@ -110,4 +121,10 @@ export class ControllerReport {
   private set(flag: number, on: boolean): void {
     this.flags = on ? this.flags | flag : this.flags & ~flag;
   }
+}
+
+function inputOf(what: Happening): UnheardOpening['input'] | null {
+  if (what.word === 'interlock') return what.closed ? null : 'interlock';
+  if (what.word === 'supply') return what.present ? null : 'supply';
+  return what.word === 'key' && !what.on ? 'arm-key' : null;
 }

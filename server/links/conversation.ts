@@ -220,7 +220,7 @@ export class Conversation {
   }
 
   private heardFirstStatus(reply: Reply, body: OkBody): void {
-    if (!this.following) this.events.startAfter(body.event, { reread: this.setting.book.holdsTakenUp });
+    if (!this.following) this.events.startAfter(body.event, { reread: true });
     this.following = true;
     this.setting.report.takeReply(reply, body);
     this.events.heardOf(body.event);
@@ -259,11 +259,11 @@ export class Conversation {
     const { report, book, telling, lease } = this.setting;
     for (const event of events) {
       const { what } = event;
-      // Of what happened before anybody here listened, only what became of own commands is told.
+      // Of what happened before anybody here listened, only what became of own commands is told, and at `ready` whether somebody was let in.
       const isPast = this.events.isPast(event.number);
       this.event = event;
       this.lastEventUs = event.atUs;
-      report.takeEvent(event);
+      report.takeEvent(event, { isPast });
       if (!isPast && (what.word === 'interlock' || what.word === 'lease')) lease.end();
       const entry = what.word === 'began' || what.word === 'ended' ? book.byTag(what.tag) : undefined;
       if (entry !== undefined) this.input(entry, { kind: what.word === 'began' ? 'began' : 'ended' });

@@ -98,7 +98,8 @@ class LinkDriver implements TurntableLink {
       ready: (sameBoot) => {
         connection.ready(this.remark());
         const controller = this.controller();
-        if (controller !== null) telling.tell({ kind: 'ready', at: telling.now(), controller, sameBoot });
+        if (controller !== null)
+          telling.tell({ kind: 'ready', at: telling.now(), controller, sameBoot, unheard: report.unheard(clock.utcMs()) });
       },
       refused: (why) => this.fail('refused', why),
     });

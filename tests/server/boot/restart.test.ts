@@ -186,6 +186,25 @@ describe('an arm', () => {
     expect(await armOf()).not.toBeNull();
   });
 
+  test('does not outlive a door that was opened and closed while no server listened', async () => {
+    await lab.arm();
+    const { world } = lab;
+    await lab.stop();
+    await world.clock.advance(60_000);
+    world.controller(demoIds.rig).openInterlock();
+    await world.clock.advance(30_000);
+    world.controller(demoIds.rig).closeInterlock();
+    await world.clock.advance(60_000);
+    lab = await LabServer.start(database(), { world });
+    await lab.advance(3_000);
+    expect(lab.station().link.controller()).toMatchObject({ interlockClosed: true, armKey: true });
+    expect(await armOf()).toBeNull();
+    const { body } = await lab.as('owner', 'GET', `/labs/${demoIds.lab}/audit`).expect(200);
+    expect((body.items as { data: { why?: string } }[]).map(({ data }) => data.why)).toContain(
+      'the interlock was opened while no server listened',
+    );
+  });
+
   test('does not outlive a restart of the controller that no server heard', async () => {
     await lab.arm();
     const { world } = lab;

@@ -115,7 +115,7 @@ export class FakeLink implements TurntableLink {
     const ids = new Set(motions.map(({ id }) => id));
     this.clock.after(5, () => {
       for (const event of this.ring) if (ids.has(event.commandId)) this.tell(event);
-      this.tell({ kind: 'ready', at: this.at(), controller: this.controller(), sameBoot: true });
+      this.tell({ kind: 'ready', at: this.at(), controller: this.controller(), sameBoot: true, unheard: null });
     });
   }
 
@@ -147,7 +147,7 @@ export class FakeLink implements TurntableLink {
   restore(sameBoot: boolean): void {
     this.up = true;
     for (const event of this.unsaid.splice(0)) this.tell(event);
-    this.tell({ kind: 'ready', at: this.at(), controller: this.controller(), sameBoot });
+    this.tell({ kind: 'ready', at: this.at(), controller: this.controller(), sameBoot, unheard: null });
     for (const command of this.unconfirmed.splice(0)) this.halt(command);
   }
 
@@ -211,7 +211,7 @@ export class FakeLink implements TurntableLink {
     this.bootId = `${this.bootId}+`;
     this.warningDue = true;
     this.say({ kind: 'reset', at: this.at(), bootId: this.bootId });
-    this.say({ kind: 'ready', at: this.at(), controller: this.controller(), sameBoot: false });
+    this.say({ kind: 'ready', at: this.at(), controller: this.controller(), sameBoot: false, unheard: null });
   }
 
   /** The angle now, also in a motion. */
