@@ -1,13 +1,12 @@
 import { useMemo, useState } from 'react';
 import { View } from 'react-native';
 import { Body, Field, Label, Num, Panel, Section } from '@/components/ui';
-import { readDecimal } from '@/components/ui/read-decimal';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { formatPercent } from '@/shared/lib/format-number';
 import { adviseNight } from '@/shared/planning/advise-night';
 import { pairsToReach, type NightForecast } from '@/shared/planning/night-forecast';
 import type { RigDocument } from '@/shared/rig/document';
-import { dwellWords, pairsOf, sourceLines, strategyLines } from './night-words';
+import { dwellWords, pairsOf, readWantedU, sourceLines, strategyLines } from './night-words';
 import type { Plan } from './plan';
 
 const shownSources = 4;
@@ -85,12 +84,9 @@ function Strategies({ forecast }: { forecast: NightForecast }) {
 /** How many pairs a wanted u(G) takes at the beat of the plan. */
 function Wanted({ forecast: { cadence }, rig }: { forecast: NightForecast; rig: RigDocument }) {
   const [text, setText] = useState('');
-  const percent = readDecimal(text);
-  const isWrong = text.trim() !== '' && (percent === null || !(percent > 0));
-  const pairs = useMemo(
-    () => (percent === null || !(percent > 0) ? null : pairsToReach(rig, cadence, percent / 100)),
-    [rig, cadence, percent],
-  );
+  const wanted = readWantedU(text);
+  const share = wanted !== null && 'share' in wanted ? wanted.share : null;
+  const pairs = useMemo(() => (share === null ? null : pairsToReach(rig, cadence, share)), [rig, cadence, share]);
   return (
     <View className="gap-2">
       <Field
@@ -99,11 +95,11 @@ function Wanted({ forecast: { cadence }, rig }: { forecast: NightForecast; rig: 
         unit="%"
         value={text}
         onChange={setText}
-        error={isWrong ? 'a number above 0, for example 0.4' : undefined}
+        error={wanted !== null && 'wrong' in wanted ? wanted.wrong : undefined}
         testID="wanted-u"
       />
       <Body role="status" testID="wanted-pairs">
-        {text.trim() === '' || isWrong
+        {share === null
           ? 'Tells how many pairs it takes at the beat of this plan.'
           : pairs === null
             ? 'No number of pairs comes so far: what the rig\u2019s own u leave open is more. Measure the greatest source better.'

@@ -1,3 +1,4 @@
+import { readDecimal } from '@/components/ui/read-decimal';
 import { inputWords } from '@/shared/evaluation/input-words';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { formatPercent } from '@/shared/lib/format-number';
@@ -57,4 +58,16 @@ export function dwellWords({ predicted: { statistics }, wandering, enoughPairs }
       ? 'Every further pair makes u(G) smaller.'
       : `From ${enoughPairs} ${enoughPairs === 1 ? 'pair' : 'pairs'} on, more of them lower u(G) by less than 5 %.`;
   return `The dwells leave ${formatPercent(statistics)} of G open${drift}. ${enough}`;
+}
+
+/** A wanted u(G) as written in per cent of G: its share, or what is wrong with it; null for nothing written. */
+export function readWantedU(text: string): { share: number } | { wrong: string } | null {
+  const written = text.trim();
+  if (written === '') return null;
+  const percent = readDecimal(written.replace(/\s*%$/, ''));
+  const right = 'Give it in per cent of G, for example 0.4.';
+  if (percent === null) return { wrong: `This is no number. ${right}` };
+  if (!(percent > 0)) return { wrong: `u is above 0. ${right}` };
+  if (percent >= 100) return { wrong: `100 % or more says nothing about G. ${right}` };
+  return { share: percent / 100 };
 }
