@@ -33,8 +33,9 @@ function sourceOf({ sources }: RigDocument): { massKg: number; x: number; y: num
   if (sources.shape !== 'cylinder') return [{ massKg, x: orbit, y: 0, z: height }];
   const [radius, length] = [sources.radius?.value ?? 0, sources.height?.value ?? 0];
   const azimuths = 48;
-  const halves = gauss8.flatMap(([x, w]) => [-1, 1].map((side) => [(1 + side * x) / 2, w / 2] as const));
-  return halves.flatMap(([r, wr]) =>
+  const whole = gauss8.flatMap(([x, w]) => [-1, 1].map((side) => [(1 + side * x) / 2, w / 2] as const));
+  const halves = whole.flatMap(([z, w]) => [0, 0.5].map((from) => [from + z / 2, w / 2] as const));
+  return whole.flatMap(([r, wr]) =>
     halves.flatMap(([z, wz]) =>
       Array.from({ length: azimuths }, (_, k) => {
         const t = (2 * Math.PI * (k + 0.5)) / azimuths;
