@@ -30,8 +30,10 @@ const cylinders = (rig: RigDocument, heightM: number) =>
 const shaped = (fromDeg: number, toDeg: number) => ({ viaDeg: (fromDeg + toDeg) / 2, afterS: 210 });
 
 /** Of a spot on a scale, the pendulum 11 mrad from the line perpendicular to it. */
-const spot = (distanceM: number, fold: number, { zero, sense }: { zero: number; sense: 1 | -1 }) => (angle: number) =>
-  zero + sense * distanceM * Math.tan(fold * (angle + 0.011));
+const spot =
+  (distanceM: number, fold: number, { zero, sense }: { zero: number; sense: 1 | -1 }) =>
+  (angle: number) =>
+    zero + sense * distanceM * Math.tan(fold * (angle + 0.011));
 
 interface Geometry {
   rig: RigDocument;
@@ -63,7 +65,11 @@ const axes = {
     rad: { unit: 'rad', of: (angle: number) => angle },
     mrad: { unit: 'mrad', of: (angle: number) => 1e3 * angle },
     µrad: { unit: 'urad', of: (angle: number) => 1e6 * angle },
-    'm, zero not told': { unit: 'm', lever: { distance: metres(5), fold: 2, sense: 1 }, of: (angle: number) => 0.7 + 5 * Math.tan(2 * angle) },
+    'm, zero not told': {
+      unit: 'm',
+      lever: { distance: metres(5), fold: 2, sense: 1 },
+      of: (angle: number) => 0.7 + 5 * Math.tan(2 * angle),
+    },
     'm, its zero told': {
       unit: 'm',
       lever: { distance: metres(2.5), fold: 2, sense: 1, zero: metres(-0.02) },
