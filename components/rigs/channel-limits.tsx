@@ -8,7 +8,7 @@ import type { ChannelLimit } from '@/shared/alarms/limits';
 import { addChannelLimit, listChannelLimits, removeChannelLimit, type ChannelLimitView } from '@/shared/contracts/alarms';
 import { listChannels } from '@/shared/contracts/data';
 import { formatDuration } from '@/shared/lib/format-duration';
-import { limitOf, limitWords, type LimitDraft } from './limit-words';
+import { limitOf, limitWords, windowProblem, type LimitDraft } from './limit-words';
 
 /** What a channel may not pass without somebody hearing of it. */
 export function ChannelLimits({ rigId }: { rigId: string }) {
@@ -100,7 +100,7 @@ function LimitSheet({ rigId, onClose }: { rigId: string; onClose: () => void }) 
     span: '',
     windowMin: '10',
     atMostS: '60',
-    forS: '60',
+    forS: '600',
     rings: 'morning',
   });
   const [chosen, setChosen] = useState('');
@@ -119,7 +119,7 @@ function LimitSheet({ rigId, onClose }: { rigId: string; onClose: () => void }) 
       unit={shown}
       value={draft[key]}
       onChange={(text) => setDraft({ ...draft, [key]: text })}
-      error={errors[`limit.${fieldPaths[key]}`]}
+      error={(key === 'windowMin' ? windowProblem(draft, readDecimal) : undefined) ?? errors[`limit.${fieldPaths[key]}`]}
       testID={`limit-${key}`}
     />
   );

@@ -15,6 +15,15 @@ export interface LimitDraft {
   rings: ChannelLimit['rings'];
 }
 
+const windowsMin = { least: 1, most: 1440 };
+
+/** What is wrong with the time over which slope and span are looked at, in its own unit. */
+export function windowProblem({ windowMin }: Pick<LimitDraft, 'windowMin'>, read: (text: string) => number | null): string | undefined {
+  const minutes = read(windowMin);
+  if (minutes !== null && minutes >= windowsMin.least && minutes <= windowsMin.most) return undefined;
+  return `${String(windowsMin.least)} to ${String(windowsMin.most)} min`;
+}
+
 /** The limit that was typed; null while a number is missing or is none. */
 export function limitOf(draft: LimitDraft, read: (text: string) => number | null): ChannelLimit | null {
   const { kind, rings } = draft;
@@ -27,7 +36,7 @@ export function limitOf(draft: LimitDraft, read: (text: string) => number | null
   if (forS === null) return null;
   if (kind === 'slope' || kind === 'span') {
     const [greatest, windowMin] = [read(kind === 'slope' ? draft.perH : draft.span), read(draft.windowMin)];
-    if (greatest === null || windowMin === null) return null;
+    if (greatest === null || windowMin === null || windowProblem(draft, read) !== undefined) return null;
     const more = { windowS: 60 * windowMin, deadBand: 0.02, forS, rings };
     return kind === 'slope' ? { kind, greatestPerH: greatest, ...more } : { kind, atMost: greatest, ...more };
   }

@@ -105,9 +105,9 @@ export class RunDriver {
     return this.knownAnswer(key, this.snapshot.state === 'held' && this.halting === 0) ?? this.actFirst('hold', { by, key });
   }
 
-  /** Decelerates at once and ends the run. */
+  /** Decelerates at once and ends the run. A repeat goes to the controller too, for nothing comes after a stop; the log has it once. */
   stop(by: string, key: string | null = null): Answer {
-    return this.knownAnswer(key) ?? this.actFirst('stop', { by, key });
+    return this.knownAnswer(null) ?? this.actFirst('stop', { by, key });
   }
 
   /** Holds when the present step has ended. */

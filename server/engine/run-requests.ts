@@ -1,5 +1,7 @@
 import type { RunStart } from '@/shared/archive/run-records';
 import type { Instant } from '../interfaces/clock';
+import { Draft, nothingOut } from './draft';
+import { finishRefusal } from './finishing';
 import type { Advance, Arm, RunEvent, RunSnapshot } from './run-context';
 import type { Answer } from './run-driver-parts';
 import { mayResume, maySkip } from './run-facts';
@@ -36,8 +38,12 @@ export class RunRequests {
   }
 
   /** The run ends on a whole pair: with the one under way, or the last one after which it is over by `finishByUtcMs`. `by` empty: the night window asks, or the few good dwells. */
-  finishEarly(by: string, finishByUtcMs: number | null = null): Promise<Answer> {
-    return this.ask({ type: 'finish-early', at: this.run.now(), by, finishByUtcMs }, 'finish-asked');
+  async finishEarly(by: string, finishByUtcMs: number | null = null): Promise<Answer> {
+    const event: RunEvent = { type: 'finish-early', at: this.run.now(), by, finishByUtcMs };
+    // Rules ask again and again: what is refused to them is no event of the run.
+    const { context } = this.run.snapshot();
+    const why = by === '' && !this.run.isOver() ? finishRefusal(new Draft(this.run.start, event, { context, out: nothingOut })) : null;
+    return why === null ? this.ask(event, 'finish-asked') : { ok: false, why };
   }
 
   /** The run goes on to the end of its protocol after all. */

@@ -220,7 +220,7 @@ export class Conversation {
   }
 
   private heardFirstStatus(reply: Reply, body: OkBody): void {
-    if (!this.following) this.events.startAfter(body.event, { reread: true });
+    if (!this.following) this.events.startAfter(body.event);
     this.following = true;
     this.setting.report.takeReply(reply, body);
     this.events.heardOf(body.event);

@@ -13,10 +13,10 @@ export class EventSequence {
   /** Events up to this number happened before anybody here listened. */
   private past = 0;
 
-  /** Counts from after `number`: what came before is not of interest, or only what the ring still keeps of it (`reread`). */
-  startAfter(number: number, { reread = false } = {}): void {
+  /** What came up to `number` is past; of it there is what the ring still keeps, from its oldest event on. */
+  startAfter(number: number): void {
     this.past = number;
-    this.last = reread ? 0 : number;
+    this.last = 0;
     this.newest = number;
     this.early.clear();
   }

@@ -2,7 +2,7 @@ import { inputWords } from '../evaluation/input-words';
 import type { Finding } from '../protocol/finding';
 import type { RigDocument } from '../rig/document';
 import { excursionFindings, nearLimitAdvice } from './excursion';
-import { together, type PredictedU } from './plan-uncertainty';
+import { togetherSource, type PredictedU } from './plan-uncertainty';
 
 /** The noise counts as small beside the geometry below this share of it. */
 const smallShare = 0.1;
@@ -17,7 +17,7 @@ function geometryDecides(predicted: PredictedU | null): Finding[] {
   if (predicted === null) return [];
   const { bySource, statistics } = predicted;
   const [source, u] = Object.entries(bySource)
-    .filter(([name]) => name !== 'reversal_rad' && name !== together)
+    .filter(([name]) => name !== 'reversal_rad' && name !== togetherSource)
     .reduce((a, b) => (b[1] > a[1] ? b : a), ['', 0]);
   if (!(statistics < smallShare * u)) return [];
   return [

@@ -1,6 +1,6 @@
 import type { RigDocument } from '../rig/document';
 import type { Cadence } from './night-noise';
-import { predictU, together, type PredictedU } from './plan-uncertainty';
+import { predictU, togetherSource, type PredictedU } from './plan-uncertainty';
 import { strategyNights, type StrategyNight } from './strategies';
 
 /** What a planned night is expected to give, and what else could be done with its hours. */
@@ -37,7 +37,7 @@ function enoughPairs(rig: RigDocument, cadence: Cadence): number | null {
   const most = predictU(rig, { ...cadence, dwells: 2 * mostPairs });
   if (most === null) return null;
   const { relativeU, statistics, bySource } = most;
-  const rest = Math.sqrt(Math.max(0, relativeU ** 2 - statistics ** 2 - (bySource[together] ?? 0) ** 2));
+  const rest = Math.sqrt(Math.max(0, relativeU ** 2 - statistics ** 2 - (bySource[togetherSource] ?? 0) ** 2));
   return pairsToReach(rig, cadence, enough * rest);
 }
 

@@ -45,7 +45,7 @@ export function differenceU(rig: RigDocument, cadence: Cadence, signalRad: numbe
   const squares = weights.reduce((sum, w) => sum + w * w, 0);
   const own = (dwell.inflation * white) / cadence.dwellS + thermal(rig, oscillator, dwell);
   const scatter = own * squares + walk * wanderingS(weights, cadence, dwell.walk);
-  return Math.sqrt(Math.max(0, scatter + (told(rig, cadence, signalRad)?.added ?? 0)));
+  return Math.sqrt(Math.max(0, scatter + (toldByRinging(rig, cadence, signalRad)?.added ?? 0)));
 }
 
 /** Variance that the air's or the fibre's heat gives the centre of a dwell, rad2 (physics.md I1). */
@@ -81,7 +81,7 @@ function wanderingS(
 }
 
 /** What the ringing of the night itself tells, in its dwells and after its kicks. */
-export interface Told {
+export interface ToldByRinging {
   /** Of ω (rad/s) and γ (1/s). */
   covariance: Matrix;
   /** Covariance of near minus far (rad) with ω and with γ. */
@@ -94,7 +94,7 @@ export interface Told {
  * Near and far ring in opposite senses, so an error of ω and γ shifts their centres in opposite senses too (physics.md C4); and a walk of the zero
  * within a dwell moves both its centre and what it says about ω and γ. Null where nothing rings.
  */
-export function told(rig: RigDocument, cadence: Cadence, signalRad: number): Told | null {
+export function toldByRinging(rig: RigDocument, cadence: Cadence, signalRad: number): ToldByRinging | null {
   const oscillator = oscillatorOf(rig);
   if (oscillator === null || cadence.dwells < 1 || (!cadence.rings && cadence.calibrations.length === 0)) return null;
   const { white, walk } = densities(rig);

@@ -8,10 +8,10 @@ import { inertiaKgM2, oscillatorOf, type Oscillator } from '../physics/oscillato
 import { geometryOf, torquePerG } from '../physics/torque';
 import type { RigDocument } from '../rig/document';
 import { at } from '../statistics/symmetric';
-import { differenceU, told, type Cadence } from './night-noise';
+import { differenceU, toldByRinging, type Cadence } from './night-noise';
 
 /** What near minus far, period and decay time leave open because the same dwells tell all three. */
-export const together = 'correlation';
+export const togetherSource = 'correlation';
 
 /** u of G after a night, by what it comes from. */
 export interface PredictedU {
@@ -117,7 +117,7 @@ function withTogether(parts: BudgetPart[], lines: readonly BudgetLine[], bigG: n
     lines.reduce((sum, one) => sum + (isCorrelation(one.input) ? Math.sign(one.share) * one.contribution ** 2 : 0), 0) / bigG ** 2;
   if (added === 0) return parts;
   const inputs: string[] = ['reversal_rad', 'period_s', 'decayTime_s'];
-  if (added > 0) return [...parts, { source: together, inputs, relativeU: Math.sqrt(added), halved: Math.sqrt(added) / 2 }];
+  if (added > 0) return [...parts, { source: togetherSource, inputs, relativeU: Math.sqrt(added), halved: Math.sqrt(added) / 2 }];
   const squares = parts.reduce((sum, { source, relativeU }) => sum + (inputs.includes(source) ? relativeU ** 2 : 0), 0);
   const left = Math.sqrt(Math.max(0, 1 + added / squares));
   return parts.map((one) => (inputs.includes(one.source) ? { ...one, relativeU: left * one.relativeU, halved: left * one.halved } : one));
@@ -149,7 +149,7 @@ interface Night {
 /** What a night tells: period and decay time as means, weighted by u⁻², with what was measured beforehand, which errs alone. */
 function ofNight(rig: RigDocument, cadence: Cadence, { signal, u, periodS, decayTimeS }: Night): ObservedU {
   const { period_s: measuredPeriod, decayTime_s: measuredDecay } = rig.measured ?? {};
-  const ringing = told(rig, cadence, signal);
+  const ringing = toldByRinging(rig, cadence, signal);
   if (ringing === null) return { signal: u, period: measuredPeriod?.u ?? 0, decay: measuredDecay?.u ?? 0 };
   const { covariance, withDifference } = ringing;
   // Both fall where ω and γ rise.

@@ -33,6 +33,8 @@ function withinWindow({ from, until }: { from: string; until: string }, { startU
   const end = formatClock(endUtcMs, { timeZone });
   if (endUtcMs - startUtcMs > dayMs) return false;
   const sameDay = formatDay(startUtcMs, timeZone) === formatDay(endUtcMs, timeZone);
-  if (from < until) return sameDay && start >= from && end <= until;
-  return start >= from ? sameDay || end <= until : sameDay && end <= until;
+  // Where clocks go back, a stay may end at an earlier time of day than it began.
+  const inMorning = sameDay && start <= until && end <= until;
+  if (from < until) return start >= from && inMorning;
+  return start >= from ? sameDay || end <= until : inMorning;
 }

@@ -5,7 +5,7 @@ import { predictSignal } from '@/shared/protocol/predict';
 import type { RigDocument } from '@/shared/rig/document';
 import { differenceU, type Cadence } from '@/shared/planning/night-noise';
 import type { Alternative } from '@/shared/planning/strategies';
-import { predictU, together, type PredictedU } from '@/shared/planning/plan-uncertainty';
+import { predictU, togetherSource, type PredictedU } from '@/shared/planning/plan-uncertainty';
 import { abaDifference } from '@/shared/statistics/drift';
 import { offset, ringDownSegment } from '@/shared/statistics/ring-down';
 import { fitSeparable, type SeparableSegment } from '@/shared/statistics/variable-projection';
@@ -91,7 +91,7 @@ function plannedOfG(rig: RigDocument, cadence: Cadence): number {
   if (period === undefined || decay === undefined) throw new Error('the planned rigs have a measured pendulum');
   const measured = { period_s: { ...period, u: 1e3 * period.value }, decayTime_s: { ...decay, u: 1e3 * decay.value } };
   const { bySource } = predictU({ ...rig, measured }, cadence) as PredictedU;
-  return Math.hypot(...['reversal_rad', 'period_s', 'decayTime_s', together].map((source) => bySource[source] ?? 0));
+  return Math.hypot(...['reversal_rad', 'period_s', 'decayTime_s', togetherSource].map((source) => bySource[source] ?? 0));
 }
 
 /** Of the ratios: how far the plan is off on the whole. */

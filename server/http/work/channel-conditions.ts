@@ -1,4 +1,4 @@
-import { passesLimit } from '@/shared/alarms/limits';
+import { passesLimit, type ChannelLimit, type ChannelNow } from '@/shared/alarms/limits';
 import { NEAR_LIMIT, swingRoomRad } from '@/shared/conditions/dwell-verdict';
 import { UnusableArchive } from '@/shared/archive/unusable-archive';
 import { scaleOf, toRad, type ChannelScale } from '@/shared/evaluation/channel-scale';
@@ -31,24 +31,42 @@ export async function limitConditions(
   const found: Condition[] = [];
   for (const { id, limit, channelId, channelName, unit, labId } of limits) {
     const [code, subject] = [codes[limit.kind], subjectOfLimit(id)];
-    const key = { labId, channelId };
-    const window = 'windowS' in limit ? { utcMs, windowMs: 1000 * limit.windowS } : null;
-    const now = {
-      last: await lastSampleOf(connection, key),
-      slopePerH: limit.kind === 'slope' && window !== null ? await slopePerHOf(connection, key, window) : null,
-      span: limit.kind === 'span' && window !== null ? await spanOf(connection, key, window) : null,
-    };
-    if (!passesLimit(limit, { utcMs, ...now, met: isMet(code, subject) })) continue;
-    const value = now.last === null ? '' : `${rounded(now.last.value, 4)} ${unit}`;
-    const words = {
-      level: `${channelName} is at ${value}.`,
-      slope: `${channelName} changes by ${rounded(now.slopePerH ?? 0)} ${unit} an hour.`,
-      span: `${channelName} spans ${rounded(now.span ?? 0)} ${unit} in ${formatDuration((window?.windowMs ?? 0) / 1000)}.`,
-      silence: `${channelName} has had no sample since ${new Date(now.last?.utcMs ?? 0).toISOString().slice(11, 19)} UTC.`,
-    }[limit.kind];
+    const now = await channelNow(connection, { labId, channelId }, { limit, utcMs });
+    if (!passesLimit(limit, { ...now, met: isMet(code, subject) })) continue;
+    const words = `${channelName} ${passedWords(limit, now, unit)}.`;
     found.push({ code, subject, words, runId: null, rings: limit.rings, onDelayS: 'forS' in limit ? limit.forS : 0 });
   }
   return found;
+}
+
+type Seen = Omit<ChannelNow, 'met'>;
+
+/** What the limit asks to be known of the channel. */
+async function channelNow(
+  connection: Connection,
+  channel: { labId: string; channelId: string },
+  { limit, utcMs }: { limit: ChannelLimit; utcMs: number },
+): Promise<Seen> {
+  const window = (windowS: number) => ({ utcMs, windowMs: 1000 * windowS });
+  return {
+    utcMs,
+    last: await lastSampleOf(connection, channel),
+    slopePerH: limit.kind === 'slope' ? await slopePerHOf(connection, channel, window(limit.windowS)) : null,
+    span: limit.kind === 'span' ? await spanOf(connection, channel, window(limit.windowS)) : null,
+  };
+}
+
+function passedWords(limit: ChannelLimit, { last, slopePerH, span }: Seen, unit: string): string {
+  switch (limit.kind) {
+    case 'level':
+      return `is at ${rounded(last?.value ?? NaN, 4)} ${unit}`;
+    case 'slope':
+      return `changes by ${rounded(slopePerH ?? NaN)} ${unit} an hour`;
+    case 'span':
+      return `spans ${rounded(span ?? NaN)} ${unit} in ${formatDuration(limit.windowS)}`;
+    case 'silence':
+      return `has had no sample since ${new Date(last?.utcMs ?? 0).toISOString().slice(11, 19)} UTC`;
+  }
 }
 
 /** The pendulum beyond 90 % of its clearance or of the range of its readout, about its mean over the last four periods. */

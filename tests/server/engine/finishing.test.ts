@@ -151,6 +151,7 @@ describe('the night window asks', () => {
       why: expect.stringContaining('Not even the pair under way'),
     });
     expect(bench.driver.facts().finishing).toBeNull();
+    expect([...logged(flat, 'finish-early-refused'), ...logged(bench, 'finish-early-refused')]).toEqual([]);
   });
 
   test('the pairs after which the run is over in time are made, with the way to the last station; the others are not', async () => {

@@ -12,9 +12,20 @@ const numbers = (events: EventMessage[]) => events.map((given) => given.number);
 test('gives events on as they come, each once', () => {
   const sequence = new EventSequence();
   sequence.startAfter(4);
+  sequence.skipTo(5);
   expect(numbers(sequence.add(event(5)))).toEqual([5]);
   expect(numbers(sequence.add(event(5)))).toEqual([]);
   expect(numbers(sequence.add(event(3)))).toEqual([]);
+  expect(sequence.missing).toBeNull();
+});
+
+test('what is past is asked for from the oldest on, and told from what comes', () => {
+  const sequence = new EventSequence();
+  sequence.startAfter(40);
+  expect(sequence.missing).toBe(1);
+  expect(numbers(sequence.skipTo(39))).toEqual([]);
+  expect(numbers([39, 40, 41].flatMap((number) => sequence.add(event(number))))).toEqual([39, 40, 41]);
+  expect([40, 41].map((number) => sequence.isPast(number))).toEqual([true, false]);
   expect(sequence.missing).toBeNull();
 });
 
@@ -32,6 +43,7 @@ test('keeps back what comes after a gap, and names the gap', () => {
 test('knows from a reply that the last event was lost', () => {
   const sequence = new EventSequence();
   sequence.startAfter(7);
+  sequence.skipTo(8);
   sequence.heardOf(9);
   expect(sequence.missing).toBe(8);
   expect(sequence.hasGivenOn(9)).toBe(false);

@@ -26,6 +26,13 @@ test('the night of a change of the clocks is judged by the clocks on the wall', 
   expect(inZurich('2031-03-29T21:00:00Z', '2031-03-30T05:30:00Z')).not.toBeNull();
 });
 
+test('where an hour is gone through twice, a stay that begins after the window is not in it for ending at an earlier time of day', () => {
+  // From the first 02:30 (UTC+2) to the second 02:10 (UTC+1), the window being over at 02:15.
+  const early = { nightWindow: { from: '22:00', until: '02:15' }, blackouts: [] };
+  expect(againstRoom(early, stay('2031-10-26T00:30:00Z', '2031-10-26T01:10:00Z'), 'Europe/Zurich')).not.toBeNull();
+  expect(againstRoom(early, stay('2031-10-26T00:05:00Z', '2031-10-26T01:10:00Z'), 'Europe/Zurich')).toBeNull();
+});
+
 test('a window by day', () => {
   const day = { nightWindow: { from: '08:00', until: '18:00' }, blackouts: [] };
   expect(againstRoom(day, stay('2031-02-14T08:00:00Z', '2031-02-14T16:00:00Z'), 'Europe/Zurich')).toBeNull();
