@@ -71,8 +71,8 @@ export const hopsOfOccurrence = (db: Handle, { labId, alarmId, occurrence }: { l
     .where(and(eq(alarmHops.labId, labId), eq(alarmHops.alarmId, alarmId), eq(alarmHops.occurrence, occurrence)))
     .orderBy(alarmHops.seq);
 
-/** Messages of a lab since. */
-export async function rungSince(
+/** Messages of a lab since then that reached somebody. */
+export async function reachedSince(
   db: Handle,
   labId: string,
   sinceUtcMs: number,
@@ -80,7 +80,7 @@ export async function rungSince(
   return db
     .select({ alarmId: alarmHops.alarmId, occurrence: alarmHops.occurrence, userId: alarmHops.userId })
     .from(alarmHops)
-    .where(and(eq(alarmHops.labId, labId), gte(alarmHops.at, sinceUtcMs)));
+    .where(and(eq(alarmHops.labId, labId), gte(alarmHops.at, sinceUtcMs), eq(alarmHops.outcome, 'sent')));
 }
 
 export interface Watcher {

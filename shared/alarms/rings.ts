@@ -1,4 +1,4 @@
-import { formatClock, formatDay } from '../lib/format-time';
+import { formatClock } from '../lib/format-time';
 import { isWithinHours } from './hours';
 import { alarmKinds, type AlarmCode, type Ringing } from './catalog';
 import type { CallSettings, OwnCall } from './settings';
@@ -49,17 +49,39 @@ export function nextCallee(
 const dayEnds = '22:00';
 const quarterMs = 15 * 60_000;
 
+interface Mornings {
+  /** hh:mm in the lab's zone. */
+  morningAt: string;
+  timeZone: string;
+}
+
+const isDay = (utcMs: number, { morningAt, timeZone }: Mornings): boolean => {
+  const clock = formatClock(utcMs, { timeZone });
+  return clock >= morningAt && clock < dayEnds;
+};
+
 /** When what can wait for the morning is told: now by day, else at the next morning of the lab. */
-export function morningUtcMs(utcMs: number, { morningAt, timeZone }: { morningAt: string; timeZone: string }): number {
-  const clock = (at: number) => formatClock(at, { timeZone });
-  if (clock(utcMs) >= morningAt && clock(utcMs) < dayEnds) return utcMs;
-  const today = formatDay(utcMs, timeZone);
+export const morningUtcMs = (utcMs: number, lab: Mornings): number => (isDay(utcMs, lab) ? utcMs : nextMorningUtcMs(utcMs, lab));
+
+/** The next morning of the lab, by day the one of tomorrow; now where the lab set an hour of the night. */
+export function nextMorningUtcMs(utcMs: number, lab: Mornings): number {
   // In quarters of an hour, so that a change of the clocks in the night needs no rule of its own.
-  for (let at = Math.ceil(utcMs / quarterMs) * quarterMs; at <= utcMs + 26 * 3_600_000; at += quarterMs) {
-    const sameNight = formatDay(at, timeZone) === today && clock(utcMs) >= dayEnds;
-    if (!sameNight && clock(at) >= morningAt && clock(at) < dayEnds) return at;
-  }
+  for (let at = Math.ceil(utcMs / quarterMs) * quarterMs; at <= utcMs + 26 * 3_600_000; at += quarterMs)
+    if (isDay(at, lab) && !isDay(Math.max(utcMs, at - quarterMs), lab)) return at;
   return utcMs;
+}
+
+/** So often those whom nothing reached are tried again: where nobody was reached, for the rest of the night (estimates, no source). */
+const triesAgain = { withSomebody: 6, withNobody: 20, longestMin: 30 };
+
+/**
+ * After how long those whom nothing reached are tried again, ms: after 1, 2, 4 … 30 min; null: no more.
+ * @param rounds how often they were tried again already
+ * @param anybody somebody else was reached
+ */
+export function triedAgainMs(rounds: number, anybody: boolean): number | null {
+  if (rounds >= (anybody ? triesAgain.withSomebody : triesAgain.withNobody)) return null;
+  return Math.min(triesAgain.longestMin, 2 ** rounds) * 60_000;
 }
 
 /** Later than this nobody has to wait for the end of a run: a quarter of an hour after the predicted finish, up to the next ten minutes. */

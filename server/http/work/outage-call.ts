@@ -1,8 +1,8 @@
 import { alarmKinds } from '@/shared/alarms/catalog';
-import { calleesOf, nextCallee, type Callee } from '@/shared/alarms/rings';
+import { calleesOf, nextCallee, triedAgainMs, type Callee } from '@/shared/alarms/rings';
 import type { RunFacts } from '../../engine/run-facts';
 import type { Cancel } from '../../interfaces/clock';
-import { tellByHand, type Message } from '../../notify/tell';
+import { tellByHand, worthAnotherTry, type Message, type Told } from '../../notify/tell';
 import { alarmTimes, callMembersOf, callSettingsOf, type AlarmHop, type CallMember } from '../../store/calls';
 import { pushDevicesOf, type PushDeviceRecord } from '../../store/push-devices';
 import { findRun } from '../../store/runs-read';
@@ -26,9 +26,21 @@ interface Known {
   members: Map<string, CallMember & { devices: PushDeviceRecord[] }>;
 }
 
+type Held = Known & { facts: RunFacts };
+
+/** How far the ringing for a run has come. */
+interface Call {
+  /** Whom a message reached. */
+  reached: string[];
+  /** How often all who were left were tried in vain. */
+  rounds: number;
+  /** When somebody is rung next. */
+  dueUtcMs: number;
+}
+
 export class OutageCall {
   private readonly known = new Map<string, Known>();
-  private readonly rung = new Map<string, string[]>();
+  private readonly calls = new Map<string, Call>();
   private readonly hops: Omit<AlarmHop, 'alarmId' | 'occurrence'>[] = [];
   private cancel: Cancel = () => undefined;
 
@@ -58,7 +70,7 @@ export class OutageCall {
 
   /** The database is away. */
   begin(): void {
-    this.rung.clear();
+    this.calls.clear();
     this.again(lastingMs);
   }
 
@@ -84,19 +96,48 @@ export class OutageCall {
       return facts?.state === 'held' ? [{ ...one, facts }] : [];
     });
     for (const one of held) await this.ringFor(one);
-    this.again(held.length === 0 ? lastingMs : Math.min(...held.map(({ nextAfterMs }) => nextAfterMs)));
+    const nowUtcMs = this.services.clock.utcMs();
+    const waits = held.map(({ runId }) => (this.calls.get(runId)?.dueUtcMs ?? 0) - nowUtcMs);
+    this.again(Math.max(1000, Math.min(lastingMs, ...waits)));
   }
 
-  private async ringFor({ facts, ...one }: Known & { facts: RunFacts }): Promise<void> {
+  /** The next who can be reached; where nobody can, all who are left are tried again later. */
+  private async ringFor(one: Held): Promise<void> {
+    const call = this.calls.get(one.runId) ?? { reached: [], rounds: 0, dueUtcMs: 0 };
+    this.calls.set(one.runId, call);
+    if (call.dueUtcMs > this.services.clock.utcMs()) return;
+    const missed: string[] = [];
+    let mayGo = false;
+    call.dueUtcMs = Infinity;
+    for (let next = this.nextOf(one, [...call.reached, ...missed]); next !== null; next = this.nextOf(one, [...call.reached, ...missed])) {
+      const told = await this.tell(one, next);
+      const nowUtcMs = this.services.clock.utcMs();
+      if (told.some(({ outcome }) => outcome === 'sent')) {
+        call.reached.push(next.userId);
+        call.dueUtcMs = nowUtcMs + one.nextAfterMs;
+        return;
+      }
+      missed.push(next.userId);
+      mayGo ||= worthAnotherTry(told) !== null;
+    }
+    const againMs = mayGo ? triedAgainMs(call.rounds, call.reached.length > 0) : null;
+    call.rounds += 1;
+    if (againMs !== null) call.dueUtcMs = this.services.clock.utcMs() + againMs;
+  }
+
+  private nextOf(one: Held, rung: readonly string[]): Callee | null {
+    const utcMs = this.services.clock.utcMs();
+    const callees = one.callees.filter(({ userId }) => one.members.has(userId));
+    return nextCallee(callees, { ringing: 'always', utcMs, timeZone: one.timeZone, rung });
+  }
+
+  private async tell({ facts, ...one }: Held, { userId, name }: Callee): Promise<Told[]> {
     const { clock, tell } = this.services;
+    const { email, devices } = one.members.get(userId) ?? { email: '', devices: [] };
     const at = clock.utcMs();
-    const rung = this.rung.get(one.runId) ?? [];
-    const next = nextCallee(one.callees, { ringing: 'always', utcMs: at, timeZone: one.timeZone, rung });
-    const member = next === null ? undefined : one.members.get(next.userId);
-    if (next === null || member === undefined) return;
-    this.rung.set(one.runId, [...rung, next.userId]);
-    const told = await tellByHand(tell, { email: member.email, devices: member.devices }, messageOf(one, facts));
-    this.hops.push(...told.map((each) => ({ labId: one.labId, at, userId: next.userId, name: next.name, ...each })));
+    const told = await tellByHand(tell, { email, devices }, messageOf(one, facts));
+    this.hops.push(...told.map((each) => ({ labId: one.labId, at, userId, name, ...each })));
+    return told;
   }
 }
 
