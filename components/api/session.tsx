@@ -157,6 +157,7 @@ const rolesInWords: Record<Act, string> = {
   'data.import': 'Only an analyst, an operator, a keeper or an owner may import data.',
   'data.annotate': 'Only an analyst, an operator, a keeper or an owner may write notes to the step log.',
   'data.exclude': 'Only an analyst, an operator, a keeper or an owner may exclude data.',
+  'data.retention': 'Only a keeper or an owner may decide how long samples are kept.',
   evaluate: 'Only an analyst, an operator, a keeper or an owner may evaluate a run.',
   read: 'Every member may read.',
 };

@@ -17,6 +17,7 @@ const areas: Readonly<Record<string, string>> = {
   protocol: 'Protocols',
   rig: 'Rigs',
   run: 'Runs',
+  samples: 'Samples',
   schedule: 'Schedules',
 };
 

@@ -21,6 +21,7 @@ import { ExportLinks } from './export-links';
 import { MarkBar, useMarking } from './mark-bar';
 import { ChannelPane, Pane, useReadingWords, type Linked, type PlottedSeries } from './plotted-channel';
 import { excludedWords, touching } from './stretch';
+import { ThinnedNote } from './thinned-note';
 import { turntableSeries } from './turntable-series';
 import { useRunSamples } from './use-run-samples';
 import { readAddress, writePanes, writeStretch, type AddressParams } from './view-address';
@@ -155,6 +156,7 @@ function LinkedPlots({ runId, channel, others, exclusions, coarse, whole }: Link
         {coarse.total > coarse.utcMs.length ? '; least and greatest of each stretch are drawn, all of them when you look closer' : ''}. In
         brackets: how far single readings scatter about there (k = 1).
       </Label>
+      <ThinnedNote thinned={samples.thinned} />
       {hand.cursor === null ? null : (
         <View className="flex-row">
           <TextLink href={`/runs/${runId}/replay?at=${new Date(hand.cursor).toISOString()}`} label="This moment in the replay" />

@@ -14,6 +14,7 @@ const kinds: Readonly<Record<string, string>> = {
   'alarm.ring': 'Ringing for an alarm',
   'alarm.over': 'Message that an alarm is over',
   'alarm.tell': 'Alarms of the morning',
+  'samples.thin': 'Thinning of old samples',
   evaluate: 'Evaluation of a run',
   rehearse: 'Rehearsal',
 };

@@ -8,6 +8,7 @@ import { AuditLink } from './audit-link';
 import { Members } from './members';
 import { OnCall } from './on-call';
 import { OwnCall } from './own-call';
+import { RetentionLink } from './retention-link';
 import { RoleMatrix } from './role-matrix';
 import { Watcher } from './watcher';
 
@@ -29,6 +30,7 @@ export function LabScreen() {
       <Appearance />
       <LabSettings />
       <AlarmsLink />
+      <RetentionLink />
       <AuditLink />
       <OnCall />
       <OwnCall />

@@ -21,6 +21,7 @@ const actWords: Record<Act, string> = {
   'data.import': 'Import data',
   'data.annotate': 'Write notes to the step log',
   'data.exclude': 'Exclude data with a reason, and withdraw it',
+  'data.retention': 'Decide how long samples are kept',
   evaluate: 'Evaluate a run',
   read: 'Read everything',
 };

@@ -10,7 +10,7 @@ import type { ResponseOf } from '@/shared/contracts/route';
 import type { RigView } from '@/shared/contracts/rigs';
 import { formatAgo } from '@/shared/lib/format-duration';
 import { formatSignificant } from '@/shared/lib/format-number';
-import { formatDayAndClock } from '@/shared/lib/format-time';
+import { formatDay, formatDayAndClock } from '@/shared/lib/format-time';
 import { BrokersPanel } from './brokers-panel';
 import { DeviceSheet } from './device-sheet';
 
@@ -65,10 +65,11 @@ export function DevicesPanel({ rig }: { rig: RigView }) {
 }
 
 function Channels({ channels }: { channels: Devices['channels'] }) {
+  const { timeZone } = useLab();
   if (channels.length === 0) return <Body tone="dim">No device fills a channel of this rig yet.</Body>;
   return (
     <View className="gap-2">
-      {channels.map(({ channel, lastSampleAt }) => (
+      {channels.map(({ channel, lastSampleAt, thinnedToAt }) => (
         <View key={channel.id}>
           <Body strong>
             {channel.name}, {channel.unit}
@@ -77,6 +78,9 @@ function Channels({ channels }: { channels: Devices['channels'] }) {
             {channel.rateHz === null ? '' : `${formatSignificant(channel.rateHz, 3)} Hz expected, `}
             {lastSampleAt === null ? 'no sample yet' : `last sample ${formatAgo((serverNowMs() - Date.parse(lastSampleAt)) / 1000)}`}
           </Label>
+          {thinnedToAt === null ? null : (
+            <Label>Full rate from {formatDay(Date.parse(thinnedToAt), timeZone)} on and within runs; before, summaries of 2 s.</Label>
+          )}
         </View>
       ))}
     </View>

@@ -44,6 +44,7 @@ export const NewProtocolScreen = screen('NewProtocolScreen');
 export const ProtocolRevisionsScreen = screen('ProtocolRevisionsScreen');
 export const ProtocolsScreen = screen('ProtocolsScreen');
 export const ReplayScreen = screen('ReplayScreen');
+export const RetentionScreen = screen('RetentionScreen');
 export const RigRevisionsScreen = screen('RigRevisionsScreen');
 export const RigScreen = screen('RigScreen');
 export const RigsScreen = screen('RigsScreen');

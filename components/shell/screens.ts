@@ -17,6 +17,7 @@ export { LinkScreen } from '@/components/rigs/link-screen';
 export { RigRevisionsScreen } from '@/components/rigs/rig-revisions-screen';
 export { RigScreen } from '@/components/rigs/rig-screen';
 export { RigsScreen } from '@/components/rigs/rigs-screen';
+export { RetentionScreen } from '@/components/retention/retention-screen';
 export { ReplayScreen } from '@/components/replay/replay-screen';
 export { StartScreen } from '@/components/rigs/start-screen';
 export { StationsScreen } from '@/components/rigs/stations-screen';

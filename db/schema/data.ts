@@ -1,5 +1,19 @@
 import { sql } from 'drizzle-orm';
-import { bigint, doublePrecision, foreignKey, index, json, pgTable, primaryKey, smallint, text, uniqueIndex } from 'drizzle-orm/pg-core';
+import {
+  bigint,
+  boolean,
+  doublePrecision,
+  foreignKey,
+  index,
+  integer,
+  json,
+  pgTable,
+  primaryKey,
+  smallint,
+  text,
+  unique,
+  uniqueIndex,
+} from 'drizzle-orm/pg-core';
 import type { BrokerStatus, BrokerTopic } from '../../shared/contracts/brokers';
 import type { GBasis } from '@/shared/evaluation/g-basis';
 import type { ClockChoice } from '../../shared/evaluation/clock-choice';
@@ -135,6 +149,50 @@ export const sampleSummaries = pgTable(
     mean: doublePrecision('mean').notNull(),
   },
   (table) => [primaryKey({ columns: [table.labId, table.channelId, table.level, table.at] })],
+);
+
+/** How long samples of a channel are kept; `channelId` null: those of every channel of the lab that has no rule of its own. Without a rule: for ever. */
+export const retentionRules = pgTable(
+  'retention_rules',
+  {
+    labId: key('lab_id')
+      .notNull()
+      .references(() => labs.id),
+    channelId: key('channel_id'),
+    /** Of a channel: as the lab does; its days say nothing. */
+    asLab: boolean('as_lab').notNull(),
+    /** Null: for ever. */
+    keepDays: integer('keep_days'),
+    decidedAt: instant('decided_at').notNull(),
+    decidedBy: text('decided_by').notNull(),
+  },
+  (table) => [
+    unique('retention_rules_one').on(table.labId, table.channelId).nullsNotDistinct(),
+    foreignKey({ columns: [table.labId, table.channelId], foreignColumns: [channels.labId, channels.id] }),
+  ],
+);
+
+/**
+ * Stretches of a channel of which the summaries alone are left: its samples were taken away by a rule. They begin and end where buckets of level 0 do, no two
+ * overlap, and nothing is written there any more (hand-written functions see to that).
+ */
+export const thinnedStretches = pgTable(
+  'thinned_stretches',
+  {
+    labId: key('lab_id').notNull(),
+    channelId: key('channel_id').notNull(),
+    fromAt: instant('from_at').notNull(),
+    toAt: instant('to_at').notNull(),
+    /** Samples that were taken away. */
+    samples: bigint('samples', { mode: 'number' }).notNull(),
+    /** Those of them that the audit chain does not tell of yet. */
+    untold: bigint('untold', { mode: 'number' }).notNull(),
+    thinnedAt: instant('thinned_at').notNull(),
+  },
+  (table) => [
+    primaryKey({ columns: [table.labId, table.channelId, table.fromAt] }),
+    foreignKey({ columns: [table.labId, table.channelId], foreignColumns: [channels.labId, channels.id] }),
+  ],
 );
 
 /** Stretches of runs whose samples are not evaluated. Never deleted; withdrawn once at most, then never changed (hand-written triggers). */

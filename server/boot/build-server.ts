@@ -8,6 +8,7 @@ import { CameraWatch } from '../http/work/camera-watch';
 import { BrokerWatch } from '../http/work/broker-watch';
 import { heedSchedules } from '../http/work/scheduled-starts';
 import { sendSigns } from '../http/work/signs-of-life';
+import { askForThinning } from '../http/work/thinning-job';
 import { tidyFiles } from '../http/work/tidy-files';
 import { openMqttLine } from '../ingest/mqtt-line';
 import type { Cancel } from '../interfaces/clock';
@@ -142,6 +143,7 @@ class Life {
       { name: 'signs of life', cron: '* * * * *', work: () => sendSigns(services) },
       { name: 'keep house', cron: '7 * * * *', work: () => keepHouse(db, services.clock.utcMs()) },
       { name: 'tidy files', cron: '17 * * * *', work: () => tidyFiles(services) },
+      { name: 'thin samples', cron: '41 11 * * *', work: () => askForThinning(services) },
       { name: 'anchor the audit', cron: '11 4 * * *', work: () => anchorAudit(db, { stateDir, nowUtcMs: services.clock.utcMs() }) },
     ];
     return [...(roles.includes('rig') ? ofRigs : []), ...(roles.includes('worker') ? ofWorkers : [])];

@@ -15,6 +15,7 @@ import { AlarmWatch } from '../http/work/alarm-watch';
 import { workEvaluation } from '../http/work/evaluation-job';
 import { morningJobKind, workMorning } from '../http/work/morning-job';
 import { rehearsalJobKind, workRehearsal } from '../http/work/rehearsal-job';
+import { thinningJobKind, workThinning } from '../http/work/thinning-job';
 import { tellStarter } from '../http/work/tell-starter';
 import { AppendRates } from '../ingest/append-rate';
 import { createCameraPort } from '../ingest/camera-fetch';
@@ -183,6 +184,7 @@ function buildCrew({ overrides = {} }: BuildParts, services: Services): JobCrew 
         [evaluationJobKind]: (job) => workEvaluation(services, job),
         [rehearsalJobKind]: (job) => workRehearsal(services, job),
         [morningJobKind]: (job) => workMorning(services, job),
+        [thinningJobKind]: (job) => workThinning(services, job),
       },
       mail: mailJobs({ db: database.db, clock, mail, newToken, sha256: sha256Hex }),
       calls: { ...alarmJobs(services.tell), ...runNoticeJobs(services.tell) },

@@ -2,6 +2,7 @@ import type { ImportMapping } from '@/shared/contracts/data';
 import { FrozenSamplesError, RowsAmongSamplesError, StoredMeanwhileError } from '@/server/store/import-commit';
 import { ConflictingSamplesError, UnsuitableChannelError, type ChannelRecord, type WantedChannel } from '@/server/store/imports';
 import type { RunRecord } from '@/server/store/runs-read';
+import { ThinnedSamplesError } from '@/server/store/thinned-error';
 import { isoOf } from './maker';
 import { ProblemError } from './problem-error';
 import type { Services } from './services';
@@ -41,6 +42,12 @@ export function refusalOf(error: unknown, { channelName, mapping }: Asked): unkn
       'already-exists',
       `Nothing was stored: ${String(error.rows)} rows fall among samples that ${channelName} holds at other instants, first from ${isoOf(error.stretch.fromUtcMs)} to ${isoOf(error.stretch.toUtcMs)}. Choose another channel name, or say whether such rows are stored beside them or left out.`,
       [{ path: 'choices.among', message: 'both, or leave out' }],
+    );
+  if (error instanceof ThinnedSamplesError)
+    return new ProblemError(
+      'already-exists',
+      `Nothing was stored: rows of the file lie where ${channelName} was thinned to its summaries, from ${isoOf(error.fromUtcMs)} to ${isoOf(error.toUtcMs)}. Choose another channel name, or leave out the rows from outside the run.`,
+      [{ path: 'choices.outsideRun', message: 'leave out' }],
     );
   if (error instanceof ConflictingSamplesError)
     return new ProblemError(

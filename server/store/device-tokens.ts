@@ -4,6 +4,7 @@ import type { SampleBatch } from '../interfaces/sample-store';
 import { one, type Connection, type Handle } from './database';
 import { assertSameValues, ConflictingSamplesError } from './imports';
 import { appendSamples } from './sample-store';
+import { tellingThinned } from './thinned-error';
 
 export type DeviceTokenRecord = typeof deviceTokens.$inferSelect;
 
@@ -71,22 +72,25 @@ export class ConflictingBatchError extends Error {
  * Stores the batches of one request, all or none; what is stored already is counted and left as it is. Channels are locked in the order of their ids, so that
  * no two requests wait for each other.
  * @throws ConflictingBatchError where an instant is known with another value
+ * @throws ThinnedSamplesError where the summaries alone are left of a time
  */
 export function storeBatches(
   connection: Connection,
   labId: string,
   batches: readonly (SampleBatch & { channelId: string })[],
 ): Promise<{ stored: number; known: number }> {
-  return connection.bulk(async (client) => {
-    const sum = { stored: 0, known: 0 };
-    for (const { channelId, ...batch } of [...batches].sort((a, b) => (a.channelId < b.channelId ? -1 : 1))) {
-      const { stored, known } = await appendSamples(client, { labId, channelId }, batch);
-      if (known > 0) await assertSame(() => assertSameValues(client, { labId, channelId }, batch), channelId);
-      sum.stored += stored;
-      sum.known += known;
-    }
-    return sum;
-  });
+  return tellingThinned(
+    connection.bulk(async (client) => {
+      const sum = { stored: 0, known: 0 };
+      for (const { channelId, ...batch } of [...batches].sort((a, b) => (a.channelId < b.channelId ? -1 : 1))) {
+        const { stored, known } = await appendSamples(client, { labId, channelId }, batch);
+        if (known > 0) await assertSame(() => assertSameValues(client, { labId, channelId }, batch), channelId);
+        sum.stored += stored;
+        sum.known += known;
+      }
+      return sum;
+    }),
+  );
 }
 
 async function assertSame(check: () => Promise<void>, channelId: string): Promise<void> {

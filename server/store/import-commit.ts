@@ -9,6 +9,7 @@ import {
   frozenDifference,
   gapsOfStaged,
   leaveOutAmong,
+  refuseThinned,
   replaceDiffering,
   rowsAmongSamples,
   rowsOutside,
@@ -26,6 +27,7 @@ import {
 } from './imports';
 import { makeMonths, monthsOfWindow } from './sample-months';
 import { assertChannel } from './sample-store';
+import { tellingThinned } from './thinned-error';
 
 /** A sample that was to be replaced lies in a run with a frozen evaluation. */
 export class FrozenSamplesError extends Error {
@@ -77,19 +79,23 @@ const iso = (utcMs: number) => new Date(utcMs).toISOString();
 /**
  * Tells how a file would stand to its channel; stores nothing. `read` stages the rows.
  * @throws UnsuitableChannelError where the channel has another source or unit
+ * @throws ThinnedSamplesError where rows lie in a time of which the summaries alone are left
  */
 export async function tryImport<T extends StagedFile>(
   connection: Connection,
   work: { channel: WantedChannel; window: { fromUtcMs: number; toUtcMs: number } },
   read: (staging: Staging) => Promise<T>,
 ): Promise<{ read: T; findings: StagedFindings }> {
-  return connection.bulk(async (client, handle) => {
-    const channel = await findNamedChannel(handle, work.channel);
-    if (channel !== null) assertSuitable(channel, work.channel);
-    const staging = await Staging.open(client);
-    const done = await read(staging);
-    return { read: done, findings: await findingsOf(client, staging, { channel, usualS: done.usualS, window: work.window }) };
-  });
+  return tellingThinned(
+    connection.bulk(async (client, handle) => {
+      const channel = await findNamedChannel(handle, work.channel);
+      if (channel !== null) assertSuitable(channel, work.channel);
+      const staging = await Staging.open(client);
+      const done = await read(staging);
+      if (channel !== null) await refuseThinned(client, keyOf(channel));
+      return { read: done, findings: await findingsOf(client, staging, { channel, usualS: done.usualS, window: work.window }) };
+    }),
+  );
 }
 
 async function findingsOf(
@@ -136,6 +142,7 @@ export interface StoredSum {
 /**
  * Stores an import, all or nothing: `read` stages the rows and may throw, which leaves everything as it was, a channel that was not there included.
  * @throws UnsuitableChannelError where the channel has another source or unit
+ * @throws ThinnedSamplesError where rows lie in a time of which the summaries alone are left
  * @throws StoredMeanwhileError where the import is stored already
  * @throws ConflictingSamplesError where an instant is known with another value and such rows are refused
  * @throws FrozenSamplesError where one of them was to be replaced and a frozen evaluation stands on it
@@ -162,21 +169,24 @@ export async function storeImport(
 ): Promise<{ channel: ChannelRecord } & StoredSum> {
   const { labId, importId, channel: wanted, also, window, choices, mapping, storedAt } = work;
   await makeMonths(connection.db, monthsOfWindow(window));
-  return connection.bulk(async (client, handle) => {
-    const staging = await Staging.open(client);
-    const { usualS, leftOut } = await read(staging);
-    await assertNotStored(handle, { labId, importId });
-    const channel = await findOrMakeChannel(handle, wanted);
-    assertSuitable(channel, wanted);
-    await assertChannel(client, keyOf(channel));
-    const done = await storeStaged(client, staging, { channel, choices, closeS: closeS(usualS) });
-    const sum = { ...done, leftOut: leftOut + done.leftOut };
-    await changeImport(handle, { labId, importId }, { mapping, storedAt, state: 'stored', channelId: channel.id });
-    const { rigId, name: channelName } = channel;
-    await rememberMapping(handle, { labId, rigId, channelName, columns: work.columns, mapping, usedAt: storedAt, usedBy: work.by });
-    await also?.(handle, sum);
-    return { channel, ...sum };
-  });
+  return tellingThinned(
+    connection.bulk(async (client, handle) => {
+      const staging = await Staging.open(client);
+      const { usualS, leftOut } = await read(staging);
+      await assertNotStored(handle, { labId, importId });
+      const channel = await findOrMakeChannel(handle, wanted);
+      assertSuitable(channel, wanted);
+      await assertChannel(client, keyOf(channel));
+      await refuseThinned(client, keyOf(channel));
+      const done = await storeStaged(client, staging, { channel, choices, closeS: closeS(usualS) });
+      const sum = { ...done, leftOut: leftOut + done.leftOut };
+      await changeImport(handle, { labId, importId }, { mapping, storedAt, state: 'stored', channelId: channel.id });
+      const { rigId, name: channelName } = channel;
+      await rememberMapping(handle, { labId, rigId, channelName, columns: work.columns, mapping, usedAt: storedAt, usedBy: work.by });
+      await also?.(handle, sum);
+      return { channel, ...sum };
+    }),
+  );
 }
 
 /** Two who commit the same import: the second waits here and then finds it stored. */

@@ -97,6 +97,17 @@ export async function frozenDifference(
   return rows[0]?.ms ?? null;
 }
 
+/** Lets the database refuse a row in a time of which the summaries alone are left, also one that would be left out for another reason. */
+export async function refuseThinned(client: PoolClient, { labId, channelId }: ChannelKey): Promise<void> {
+  await client.query(
+    `select refuse_thinned($1, $2, array[bucket_of('2 s', at)], array[bucket_of('2 s', at) + interval '2 s']) from (
+       select staged_rows.at from thinned_stretches cross join lateral (
+         select at from staged_rows where at >= from_at and at < to_at limit 1) as staged_rows
+       where lab_id = $1 and channel_id = $2 limit 1) as met`,
+    [labId, channelId],
+  );
+}
+
 export interface AmongStretch {
   fromUtcMs: number;
   toUtcMs: number;

@@ -1,4 +1,4 @@
-import { and, desc, eq, sql } from 'drizzle-orm';
+import { and, desc, eq, inArray, sql } from 'drizzle-orm';
 import { jobs } from '@/db/schema';
 import { timestampOfUtcMs } from '@/db/schema/columns';
 import type { Job, JobQueue } from '../interfaces/jobs';
@@ -21,6 +21,13 @@ export async function enqueueJob(
       .returning({ id: jobs.id }),
   );
   return row;
+}
+
+/** Asks for work of a lab unless such work waits or goes on already. */
+export async function askForWorkOnce(db: Handle, job: { kind: string; payload: unknown; labId: string; nowUtcMs: number }): Promise<void> {
+  const atWork = and(eq(jobs.kind, job.kind), eq(jobs.labId, job.labId), inArray(jobs.state, ['waiting', 'running']));
+  const [known] = await db.select({ id: jobs.id }).from(jobs).where(atWork).limit(1);
+  if (known === undefined) await enqueueJob(db, job);
 }
 
 /** Work of a lab that was given up, newest first; house-keeping removes it after 30 days. */

@@ -1,6 +1,6 @@
 import { pipeline } from 'node:stream/promises';
 import { Readable } from 'node:stream';
-import { DatabaseError, type PoolClient } from 'pg';
+import { DatabaseError, type PoolClient, type QueryResult } from 'pg';
 import { from as copyFrom, to as copyTo } from 'pg-copy-streams';
 import { isKey, timestampOfUtcMs } from '@/db/schema/columns';
 import type { SampleBatch, SampleStore } from '../interfaces/sample-store';
@@ -88,14 +88,16 @@ function assertUsable({ utcMs, value }: SampleBatch): void {
  * its summaries are made of all that is there, but not for ever: whoever asked is told to come again.
  */
 export async function assertChannel(client: PoolClient, { labId, channelId }: ChannelKey): Promise<void> {
-  await client.query(`set local lock_timeout = '${longestWaitMs}ms'`);
-  const known =
-    isKey(labId) &&
-    isKey(channelId) &&
-    (await client.query('select 1 from channels where lab_id = $1 and id = $2 for no key update', [labId, channelId])).rowCount === 1;
-  if (!known) throw new UnusableBatchError(`there is no channel ${channelId} in this lab`);
-  await client.query('set local lock_timeout = default');
+  // One message of several statements, which takes no parameters: both ids have the form of a UUID.
+  const results = isKey(labId) && isKey(channelId) ? await client.query(lockSql(labId, channelId)) : [];
+  const [, found] = results as unknown as QueryResult[];
+  if (found?.rowCount !== 1) throw new UnusableBatchError(`there is no channel ${channelId} in this lab`);
 }
+
+const lockSql = (labId: string, channelId: string) =>
+  `set local lock_timeout = '${longestWaitMs}ms';
+   select 1 from channels where lab_id = '${labId}' and id = '${channelId}' for no key update;
+   set local lock_timeout = default`;
 
 async function insertFew(client: PoolClient, { labId, channelId }: ChannelKey, batch: SampleBatch): Promise<number> {
   const result = await client.query(

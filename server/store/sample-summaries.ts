@@ -120,9 +120,15 @@ const nothing: SampleSum = { count: 0, least: null, greatest: null, mean: null }
 
 /**
  * Rows `(number, level, since, count, least, least_ms, greatest, greatest_ms, mean)` of the pieces in $3 to $6: a sample is a bucket of its own. Of each piece
- * only what lies in it is read, by the key of the table it comes from.
+ * only what lies in it is read, by the key of the table it comes from. Where the summaries alone are left, the buckets of level 0 that a piece of samples
+ * touches stand for them, whole.
  */
-export const rowsOfPieces = `piece as (select * from unnest($3::int[], $4::smallint[], $5::timestamptz[], $6::timestamptz[]) as piece (number, level, since, until)),
+export const rowsOfPieces = `wanted as (select * from unnest($3::int[], $4::smallint[], $5::timestamptz[], $6::timestamptz[]) as wanted (number, level, since, until)),
+  piece as (
+    select * from wanted
+    union all
+    select number, 0, bucket_of('2 s', greatest(since, from_at)), bucket_of('2 s', least(until, to_at) - interval '1 us') + interval '2 s'
+    from thinned_stretches join wanted on level is null and from_at < until and to_at > since where lab_id = $1 and channel_id = $2),
   bucket as (
     select piece.number, piece.level, own.at as since, own.count, own.least, (extract(epoch from own.least_at) * 1000)::double precision as least_ms,
       own.greatest, (extract(epoch from own.greatest_at) * 1000)::double precision as greatest_ms, own.mean
@@ -214,17 +220,21 @@ export async function extremesOf(
 export async function lastSampleOf(connection: Connection, channel: ChannelKey): Promise<{ utcMs: number; value: number } | null> {
   if (!isKey(channel.labId) || !isKey(channel.channelId)) return null;
   const own = [channel.labId, channel.channelId];
-  const { rows: buckets } = await connection.pool.query<{ at: string }>(
-    'select at::text from sample_summaries where lab_id = $1 and channel_id = $2 and level = 0 order by at desc limit 1',
+  const { rows: buckets } = await connection.pool.query<{ at: string; utcMs: number; value: number }>(
+    `select at::text, (extract(epoch from greatest(least_at, greatest_at)) * 1000)::double precision as "utcMs",
+       case when least_at > greatest_at then least else greatest end as value
+     from sample_summaries where lab_id = $1 and channel_id = $2 and level = 0 order by at desc limit 1`,
     own,
   );
-  if (buckets[0] === undefined) return null;
+  const [newest] = buckets;
+  if (newest === undefined) return null;
   const { rows } = await connection.pool.query<{ utcMs: number; value: number }>(
     `select (extract(epoch from at) * 1000)::double precision as "utcMs", value from samples
      where lab_id = $1 and channel_id = $2 and at >= $3 order by at desc limit 1`,
-    [...own, buckets[0].at],
+    [...own, newest.at],
   );
-  return rows[0] ?? null;
+  // Of a channel that was thinned to its end: the last instant that its summaries know.
+  return rows[0] ?? { utcMs: newest.utcMs, value: newest.value };
 }
 
 export const lastSampleUtcMs = async (connection: Connection, channel: ChannelKey): Promise<number | null> =>

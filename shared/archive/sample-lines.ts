@@ -29,3 +29,33 @@ function linesOf({ utcMs, value }: Samples, line: (time: string, value: string) 
     text += line(formatInstant(utcMs[index] as number), exactDecimal(value[index] as number));
   return text;
 }
+
+/** What the samples of 2 s come to; values in the channel's unit. */
+export interface SampleSummary {
+  fromUtcMs: number;
+  count: number;
+  mean: number;
+  least: number;
+  leastMs: number;
+  greatest: number;
+  greatestMs: number;
+}
+
+export const summariesHead = (unit: string): string =>
+  `from_utc,count,${['mean', 'least'].map((name) => quoted(`${name} (${unit})`)).join(',')},least_utc,${quoted(`greatest (${unit})`)},greatest_utc\n`;
+
+export const summaryLines = (summaries: readonly SampleSummary[]): string =>
+  summaries
+    .map(({ fromUtcMs, count, mean, least, leastMs, greatest, greatestMs }) =>
+      [
+        formatInstant(fromUtcMs),
+        String(count),
+        exactDecimal(mean),
+        exactDecimal(least),
+        formatInstant(leastMs),
+        exactDecimal(greatest),
+        formatInstant(greatestMs),
+      ].join(','),
+    )
+    .map((line) => `${line}\n`)
+    .join('');

@@ -153,7 +153,7 @@ export const commitImport = defineRoute({
 });
 /** Both ends belong to the window; without one it reaches as far as the channel does. */
 const exportEndSchema = z.coerce.number().min(0).max(Date.UTC(9999, 0)).optional();
-const exportQuerySchema = z.strictObject({ fromUtcMs: exportEndSchema, toUtcMs: exportEndSchema });
+export const exportQuerySchema = z.strictObject({ fromUtcMs: exportEndSchema, toUtcMs: exportEndSchema });
 const channelPath = '/labs/:labId/channels/:channelId';
 
 export const exportSamplesCsv = defineRoute({
@@ -197,6 +197,8 @@ export const readSamples = defineRoute({
     utcMs: z.array(z.number()),
     value: z.array(z.number()),
     total: z.number().int(),
+    /** Stretches of the window of which summaries of 2 s alone are left. */
+    thinned: z.array(z.strictObject({ fromUtcMs: z.number(), toUtcMs: z.number() })),
   }),
   problems: ['invalid-input', 'not-found'],
 });

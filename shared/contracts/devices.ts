@@ -45,7 +45,14 @@ export const listDevices = defineRoute({
   status: 200,
   response: z.strictObject({
     tokens: z.array(deviceTokenViewSchema),
-    channels: z.array(z.strictObject({ channel: channelViewSchema, lastSampleAt: instantSchema.nullable() })),
+    channels: z.array(
+      z.strictObject({
+        channel: channelViewSchema,
+        lastSampleAt: instantSchema.nullable(),
+        /** Before, summaries alone are left, except within runs; null where nothing was thinned. */
+        thinnedToAt: instantSchema.nullable(),
+      }),
+    ),
   }),
   problems: ['not-found'],
 });

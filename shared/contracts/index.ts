@@ -14,6 +14,7 @@ import * as link from './link';
 import * as morning from './morning';
 import * as people from './people';
 import * as protocols from './protocols';
+import * as retention from './retention';
 import * as reviews from './reviews';
 import * as rigs from './rigs';
 import type { RouteContract } from './route';
@@ -44,6 +45,7 @@ export const routes: readonly RouteContract[] = [
   doors,
   data,
   importFiles,
+  retention,
   devices,
   brokers,
   cameras,

@@ -27,6 +27,7 @@ export const acts = {
   'data.import': upTo('analyst'),
   'data.annotate': upTo('analyst'),
   'data.exclude': upTo('analyst'),
+  'data.retention': upTo('keeper'),
   evaluate: upTo('analyst'),
   read: all,
 } as const satisfies Record<string, readonly Role[]>;

@@ -109,6 +109,7 @@ function places(): Place[] {
     { name: 'on-call', path: '/lab', arrives: 'lab-screen', first: opened('change-on-call', 'on-call-sheet') },
     { name: 'camera', path: rig, arrives: 'rig-screen', first: opened('add-camera', 'camera-sheet') },
     { name: 'limit', path: rig, arrives: 'rig-screen', first: opened('add-limit', 'limit-sheet') },
+    { name: 'retention', path: '/lab/retention', arrives: 'retention-screen', first: says('kept-channels', 'for ever') },
     {
       name: 'audit',
       path: '/lab/audit',

@@ -4,6 +4,7 @@ import { storeImport, tryImport, type StoredSum } from '@/server/store/import-co
 import type { ImportRecord } from '@/server/store/import-files';
 import * as store from '@/server/store/imports';
 import type { Handle } from '@/server/store/database';
+import { thinnedWithin } from '@/server/store/retention';
 import { findRig } from '@/server/store/rigs';
 import { channelsOfRun, type RunRecord } from '@/server/store/runs-read';
 import { countSamples, extremesOf } from '@/server/store/sample-summaries';
@@ -125,10 +126,13 @@ export const dataRoutes = [
       throw new ProblemError('invalid-input', 'The window ends before it begins.', [{ path: 'toUtcMs', message: 'not before fromUtcMs' }]);
     const { channel, total } = await chooseChannel(services, { run, channels, window }, query.channelId);
     const view = { channel: channel === null ? null : channelViewOf(channel), channels: channels.map(channelViewOf), total };
-    if (channel === null) return { ...view, utcMs: [], value: [] };
-    if (total > query.points)
+    if (channel === null) return { ...view, utcMs: [], value: [], thinned: [] };
+    const gone = await thinnedWithin(services.database.db, { ...window, labId: run.labId, channelId: channel.id });
+    const thinned = gone.map(({ fromUtcMs, toUtcMs }) => ({ fromUtcMs, toUtcMs }));
+    if (total > query.points || thinned.length > 0)
       return {
         ...view,
+        thinned,
         ...(await extremesOf(
           services.database,
           { ...window, labId: run.labId, channelId: channel.id },
@@ -136,7 +140,7 @@ export const dataRoutes = [
         )),
       };
     const batch = await services.samples.read(run.labId, channel.id, window);
-    return { ...view, utcMs: [...batch.utcMs], value: [...batch.value] };
+    return { ...view, thinned, utcMs: [...batch.utcMs], value: [...batch.value] };
   }),
 ];
 

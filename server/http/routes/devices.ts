@@ -5,7 +5,9 @@ import { MOST_PROBLEMS, readNdjson, type LineProblem, type ReadSamples } from '@
 import type { Transaction } from '@/server/store/database';
 import * as store from '@/server/store/device-tokens';
 import { channelsOfRig, findOrMakeChannel, type ChannelRecord } from '@/server/store/imports';
+import { thinnedOfLab } from '@/server/store/retention';
 import { findRig } from '@/server/store/rigs';
+import { ThinnedSamplesError } from '@/server/store/thinned-error';
 import { lastSampleUtcMs } from '@/server/store/sample-summaries';
 import { audited } from '../audited';
 import { bearerOf, boundedBody } from '../device-request';
@@ -67,10 +69,15 @@ const deviceRoutesOfLab = [
     await assertRig(services, rig);
     const { db } = services.database;
     const streams = (await channelsOfRig(db, rig.labId, rig.rigId)).filter((channel) => ofRig(channel) && channel.source === 'stream');
+    const thinned = await thinnedOfLab(db, rig.labId);
     const last = await Promise.all(streams.map(({ id }) => lastSampleUtcMs(services.database, { labId: rig.labId, channelId: id })));
     return {
       tokens: (await store.deviceTokensOf(db, rig)).map(viewOf),
-      channels: streams.map((channel, index) => ({ channel: channelViewOf(channel), lastSampleAt: isoOrNull(last[index] ?? null) })),
+      channels: streams.map((channel, index) => ({
+        channel: channelViewOf(channel),
+        lastSampleAt: isoOrNull(last[index] ?? null),
+        thinnedToAt: isoOrNull(thinned.get(channel.id)?.toUtcMs ?? null),
+      })),
     };
   }),
 
@@ -166,11 +173,27 @@ async function matched(services: Services, device: store.DeviceTokenRecord, { ba
   });
 }
 
+/** The lines that came too late to be stored. */
+function thinnedLines(batches: readonly Batch[], { channelId, fromUtcMs, toUtcMs }: ThinnedSamplesError): ProblemError {
+  const late = batches.find(({ channel }) => channel.id === channelId);
+  const lines = [...(late?.lines ?? [])].filter((_, index) => {
+    const at = late?.utcMs[index] ?? NaN;
+    return at >= fromUtcMs && at < toUtcMs;
+  });
+  return refusedLines(
+    lines.map((line) => ({
+      line,
+      message: `lies where ${late?.channel.name ?? 'the channel'} was thinned to its summaries, up to ${isoOf(toUtcMs)}; nothing is added there`,
+    })),
+  );
+}
+
 async function storeAll(services: Services, device: store.DeviceTokenRecord, batches: readonly Batch[]) {
   const rows = batches.map(({ utcMs, value, channel }) => ({ utcMs, value, channelId: channel.id }));
   try {
     return await store.storeBatches(services.database, device.labId, rows);
   } catch (error) {
+    if (error instanceof ThinnedSamplesError) throw thinnedLines(batches, error);
     if (!(error instanceof store.ConflictingBatchError)) throw error;
     const batch = batches.find(({ channel }) => channel.id === error.channelId);
     const line = batch?.lines[batch.utcMs.indexOf(error.atUtcMs)] ?? 0;

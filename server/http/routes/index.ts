@@ -16,6 +16,7 @@ import { lineRoutes } from './line';
 import { liveRoutes } from './live';
 import { peopleRoutes } from './people';
 import { protocolRoutes } from './protocols';
+import { retentionRoutes } from './retention';
 import { rigRoutes } from './rigs';
 import { runRoutes } from './runs';
 import { sampleExportRoutes } from './sample-export';
@@ -41,6 +42,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...importFileRoutes,
   ...dataRoutes,
   ...sampleExportRoutes,
+  ...retentionRoutes,
   ...deviceRoutes,
   ...brokerRoutes,
   ...cameraRoutes,

@@ -5,6 +5,7 @@ import { allBrokers, tellBrokerStatus, type BrokerRecord } from '@/server/store/
 import { ConflictingBatchError, storeBatches } from '@/server/store/device-tokens';
 import { isPassing } from '@/server/store/failures';
 import { channelsOfRig, type ChannelRecord } from '@/server/store/imports';
+import { ThinnedSamplesError } from '@/server/store/thinned-error';
 import type { Services } from '../services';
 
 /** Where no broker is listened to: whether there is one now, ms. */
@@ -111,6 +112,11 @@ export class BrokerWatch {
         services.arrived(channel.rigId, { ...channel, channelId: channel.id }, batch);
         return;
       } catch (error) {
+        if (error instanceof ThinnedSamplesError) {
+          feed.refuseOf(channel.name, 'lies where the channel was thinned to its summaries; nothing is added there');
+          for (const utcMs of samples.keys()) if (utcMs >= error.fromUtcMs && utcMs < error.toUtcMs) samples.delete(utcMs);
+          continue;
+        }
         if (!(error instanceof ConflictingBatchError)) throw error;
         feed.refuseOf(channel.name, 'has another value than was stored for that instant; a sample is never changed');
         if (!samples.delete(error.atUtcMs)) break;
