@@ -58,7 +58,7 @@ async function freeBefore(
 }
 
 export interface WouldGo {
-  /** Samples that would be taken away, and from when to when they lie about. */
+  /** Samples that would be taken away, and from when to when they lie, to 2 s. */
   samples: number;
   fromUtcMs: number | null;
   toUtcMs: number | null;
@@ -77,8 +77,25 @@ export async function wouldGo(connection: Connection, channel: ChannelOfRig, cut
   const counts = (await sumsOf(connection, channel, [whole, ...gone, ...free].map(windowOf))).map(({ count }) => count);
   const ofFree = counts.slice(1 + gone.length);
   const [all, thinned, samples] = [counts[0] ?? 0, sumOf(counts.slice(1, 1 + gone.length)), sumOf(ofFree)];
-  const full = free.filter((_, index) => (ofFree[index] ?? 0) > 0).map(windowOf);
-  return { samples, fromUtcMs: full[0]?.fromUtcMs ?? null, toUtcMs: full.at(-1)?.toUtcMs ?? null, kept: all - thinned - samples };
+  const full = free.filter((_, index) => (ofFree[index] ?? 0) > 0);
+  const first = await bucketAtEnd(connection.db, channel, { stretch: full[0], order: 'asc' });
+  const last = await bucketAtEnd(connection.db, channel, { stretch: full.at(-1), order: 'desc' });
+  return { samples, fromUtcMs: first, toUtcMs: last === null ? null : last + bucketUs / 1000, kept: all - thinned - samples };
+}
+
+/** Where the first or the last bucket of a stretch begins, UTC ms. */
+async function bucketAtEnd(
+  db: Handle,
+  { labId, channelId }: ChannelOfRig,
+  { stretch, order }: { stretch: Stretch | undefined; order: 'asc' | 'desc' },
+): Promise<number | null> {
+  if (stretch === undefined) return null;
+  const us = await instantOf(
+    db,
+    sql`select at::text from sample_summaries where lab_id = ${labId} and channel_id = ${channelId} and level = 0
+        and at >= ${at(stretch.fromUs)} and at < ${at(stretch.toUs)} order by at ${sql.raw(order)} limit 1`,
+  );
+  return us === null ? null : us / 1000;
 }
 
 const sumOf = (counts: readonly number[]) => counts.reduce((sum, count) => sum + count, 0);

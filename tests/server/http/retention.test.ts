@@ -69,7 +69,8 @@ test('everything is kept for ever until somebody decides otherwise, and a dry ru
   await thin();
   const { body } = await dryRun({ channelId, keepDays: 10 }).expect(200);
   expect(body).toMatchObject({ samples: 3600, kept: 0, channels: 1 });
-  expect(Date.parse(body.fromAt)).toBeLessThanOrEqual(startUtcMs - 20 * dayMs);
+  expect(Date.parse(body.fromAt)).toBe(Math.floor((startUtcMs - 20 * dayMs) / 2000) * 2000);
+  expect(Date.parse(body.toAt) - Date.parse(body.fromAt)).toBe(1_800_000);
   expect((await dryRun({ channelId, keepDays: 25 }).expect(200)).body).toEqual({
     samples: 0,
     fromAt: null,
