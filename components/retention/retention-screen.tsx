@@ -20,7 +20,7 @@ export function RetentionScreen() {
   return (
     <Screen title="How long samples are kept" back={{ href: '/lab' as Href, label: 'the lab' }} testID="retention-screen">
       <Body tone="dim">
-        Samples older than the rule says are thinned to their summaries: least, greatest, mean and count of every 2 s stay for ever, and
+        Samples older than the rule says are thinned to their summaries: least, greatest, mean and count of every 2&nbsp;s stay for ever, and
         plots go on showing every spike. What lies within a run, or an hour before or after it, always stays as it is.
       </Body>
       {query.isError ? <ProblemNotice title="The rules could not be read" {...wordsOf(query.error)} /> : null}

@@ -22,7 +22,7 @@ export function ruleWords({ rule, keepDays, holdsFrom }: KeptChannel, { nowMs, t
 export const thinnedWords = (thinned: KeptChannel['thinned'], timeZone: string): string | null =>
   thinned === null
     ? null
-    : `Full rate from ${formatDay(Date.parse(thinned.toAt), timeZone)} on and within runs; before, summaries of 2 s. ${countWords(thinned.samples)} went.`;
+    : `Full rate from ${formatDay(Date.parse(thinned.toAt), timeZone)} on and within runs; before, summaries of 2\u00a0s. ${countWords(thinned.samples)} went.`;
 
 /** What a rule would take away now. */
 export function dryWords({ samples, fromAt, toAt, kept, channels }: ResponseOf<typeof tryRetention>, timeZone: string): string {

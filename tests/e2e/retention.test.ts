@@ -60,7 +60,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await server.services.idle();
     await hand.page.reload();
     await row()
-      .getByText(/^Full rate from .* on and within runs; before, summaries of 2 s\. 3600 samples went\.$/)
+      .getByText(/^Full rate from .* on and within runs; before, summaries of 2\ss\. 3600 samples went\.$/)
       .waitFor();
     await hand.shoots('retention');
   });
