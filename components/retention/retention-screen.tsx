@@ -20,8 +20,8 @@ export function RetentionScreen() {
   return (
     <Screen title="How long samples are kept" back={{ href: '/lab' as Href, label: 'the lab' }} testID="retention-screen">
       <Body tone="dim">
-        Samples older than the rule says are thinned to their summaries: least, greatest, mean and count of every 2&nbsp;s stay for ever, and
-        plots go on showing every spike. What lies within a run, or an hour before or after it, always stays as it is.
+        Samples older than the rule says are thinned to their summaries: least, greatest, mean and count of every 2&nbsp;s stay for ever,
+        and plots go on showing every spike. What lies within a run, or an hour before or after it, always stays as it is.
       </Body>
       {query.isError ? <ProblemNotice title="The rules could not be read" {...wordsOf(query.error)} /> : null}
       {query.isPending ? <Loading label="Loading the rules" /> : null}

@@ -41,9 +41,14 @@ test('a device appends to its channels; a batch that comes again is stored once'
   expect(body.channels).toEqual([
     {
       channel: expect.objectContaining({ name: 'box temperature', unit: 'degC', source: 'stream', rateHz: 0.2 }),
-      lastSampleAt: iso(now - 1000), thinnedToAt: null,
+      lastSampleAt: iso(now - 1000),
+      thinnedToAt: null,
     },
-    { channel: expect.objectContaining({ name: 'spot', unit: 'mm', role: 'deflection' }), lastSampleAt: iso(now - 1000), thinnedToAt: null },
+    {
+      channel: expect.objectContaining({ name: 'spot', unit: 'mm', role: 'deflection' }),
+      lastSampleAt: iso(now - 1000),
+      thinnedToAt: null,
+    },
   ]);
   expect(body.tokens[0]).toMatchObject({
     name: 'Camera tracker',
