@@ -187,6 +187,10 @@ export const rows: Readonly<Record<string, Row>> = {
   readSamples: { params: run, allowed: 200 },
   exportSamplesCsv: { params: channel, query: () => ({ fromUtcMs: '5', toUtcMs: '4' }), allowed: 400 },
   exportSamplesNdjson: { params: channel, allowed: 200 },
+  exportSummariesCsv: { params: channel, query: () => ({ fromUtcMs: '5', toUtcMs: '4' }), allowed: 400 },
+  getRetention: { params: lab, allowed: 200 },
+  tryRetention: { params: lab, query: () => ({ keepDays: '30' }), allowed: 200 },
+  decideRetention: { params: lab, body: () => ({ channelId: null, keep: 'for-ever' }), allowed: 204 },
   listDevices: { params: rig, allowed: 200 },
   makeDeviceToken: {
     params: rig,
