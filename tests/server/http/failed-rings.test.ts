@@ -67,7 +67,7 @@ test('mail that is away for some minutes delays the ring and silences nobody; in
   await lab.as('keeper', 'POST', path(`/alarms/${id}/acknowledge`)).expect(200);
   lab.world.controller(demoIds.rig).closeInterlock();
   await minutes(1);
-}, 120_000);
+}, 300_000);
 
 test('a ring that failed while the database is away is tried again, until somebody was reached', async () => {
   await lab.run(longDwell);
@@ -81,7 +81,7 @@ test('a ring that failed while the database is away is tried again, until somebo
     expect(to()).toEqual(['casimir: Run held, database away: North bench']);
     await minutes(10);
     expect(to().at(-1)).toBe('tam: Run held, database away: North bench');
-    await minutes(30);
+    await minutes(15);
     expect(mails).toHaveLength(2);
   });
-}, 120_000);
+}, 300_000);

@@ -240,7 +240,7 @@ describe('a run', () => {
   });
 
   test('keeps the rig as it is: document and line cannot change under it', async () => {
-    await lab.run(quickProtocol());
+    await lab.until(await lab.run(quickProtocol()), 'running');
     const rig = `/labs/${demoIds.lab}/rigs/${demoIds.rig}`;
     const { etag } = (await lab.as('keeper', 'GET', rig)).headers as { etag: string };
     const other = await lab.as('keeper', 'PUT', `${rig}/link`).set('If-Match', etag).send({ kind: 'simulated' }).expect(409);
