@@ -1,7 +1,8 @@
 import { demoIds } from '@/db/demo/seed';
 import { askForThinning } from '@/server/http/work/thinning-job';
+import type { KeptChannel } from '@/shared/contracts/retention';
 import { sizes, type Size } from '../support/browser';
-import { Hand } from './support/hand';
+import { Hand, until } from './support/hand';
 import { labOfThisFile } from './support/lab';
 
 /** Years of samples: somebody decides how long a channel is kept, is told what would go, and sees what is left. */
@@ -57,7 +58,12 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     const { server } = lab();
     await server.database.connection.pool.query("update retention_rules set decided_at = decided_at - interval '1 day'");
     await askForThinning(server.services);
-    await server.services.idle();
+    const wasThinned = async () => {
+      await lab().pass(1);
+      const { body } = await server.as('viewer', 'GET', `/labs/${demoIds.lab}/retention`).expect(200);
+      return (body.channels as KeptChannel[]).find(({ channel }) => channel.name === name)?.thinned?.samples === 3600;
+    };
+    await until(wasThinned, 'the samples to be thinned');
     await hand.page.reload();
     await row()
       .getByText(/^Full rate from .* on and within runs; before, summaries of 2\ss\. 3600 samples went\.$/)
