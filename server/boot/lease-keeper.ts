@@ -1,7 +1,16 @@
 import type { Logger } from 'pino';
 import type { Cancel, Clock } from '../interfaces/clock';
 import type { Connection } from '../store/database';
-import { giveRigLeases, leasesOf, raiseRigEpoch, renewRigLeases, takeRigLease } from '../store/rig-leases';
+import {
+  giveRigLeases,
+  leasesOf,
+  raiseRigEpoch,
+  renewRigLeases,
+  takeRigLease,
+  type SeenLease,
+  type Takeable,
+  wasGivenBack,
+} from '../store/rig-leases';
 
 export interface RigKey {
   labId: string;
@@ -35,14 +44,27 @@ export interface LeaseParts {
 /** So often within its length a lease is renewed. */
 const renewals = 3;
 const retryMs = 250;
+/** Where more passes between two looks, this process or the database stood still, and so may have the driver's renewals: no more of it counts. */
+const longestGapMs = 2 * retryMs;
+
+/** A rig that another process has. */
+interface Waiting extends RigKey {
+  /** Its lease at the last look, asked for at `askedMs`; null before the first one. */
+  seen: SeenLease | null;
+  askedMs: number;
+  /** Since when it stands so: the answer in which it was new, later by whatever does not count. */
+  sinceMs: number;
+}
 
 /**
  * Leases of the rigs that this process drives: no rig has two drivers. It waits for those that another process has, each by itself, and
- * takes them over when their lease has run out, or at once where their process is known to have ended.
+ * takes them over when their lease was not renewed for its length, by this process's monotonic time, or at once where their process is known to have
+ * ended or gave them back. A driver believes in its lease until a renewal tells otherwise; where somebody else has the rig already, the controller
+ * refuses its lower epoch and the database what it writes.
  */
 export class LeaseKeeper {
   private readonly epochs = new Map<string, RigKey & { epoch: number }>();
-  private readonly waitedFor = new Map<string, RigKey>();
+  private readonly waitedFor = new Map<string, Waiting>();
   private readonly cancels: Partial<Record<'renew' | 'retry' | 'grace', Cancel>> = {};
   private closed = false;
   private away = false;
@@ -93,26 +115,23 @@ export class LeaseKeeper {
     for (const cancel of Object.values(this.cancels)) cancel();
     // A renewal that is still on its way would take again what is given back here.
     await this.working;
-    const { database, clock, holder } = this.parts;
+    const { database, holder } = this.parts;
     this.epochs.clear();
     // Where they could not be given back, the mark lets the next process take them once this one has ended.
-    const given = await giveRigLeases(database.db, { holder, nowUtcMs: clock.utcMs() }).then(
+    const given = await giveRigLeases(database.db, holder).then(
       () => true,
       () => false,
     );
     if (given) this.parts.processes.forget(holder);
   }
 
-  /** `gone`: the driver that is known to have ended; found out here where it is not given. */
-  private async tryTake(rig: RigKey, gone?: string): Promise<boolean> {
-    const { database, clock, holder, leaseMs } = this.parts;
+  private async tryTake(rig: RigKey, why?: Takeable): Promise<boolean> {
+    const { database, holder, leaseMs, processes } = this.parts;
     const { labId, rigId } = rig;
-    const nowUtcMs = clock.utcMs();
-    const lease = { labId, rigId, holder, nowUtcMs, untilUtcMs: nowUtcMs + leaseMs };
-    const epoch = await takeRigLease(database.db, { ...lease, gone: gone ?? null });
-    if (epoch === null && gone === undefined) {
+    const epoch = await takeRigLease(database.db, { labId, rigId, holder, leaseMs, why });
+    if (epoch === null && why === undefined) {
       const [other] = await leasesOf(database.db, [rigId]);
-      return other !== undefined && this.parts.processes.isGone(other.holder) && this.tryTake(rig, other.holder);
+      return other !== undefined && processes.isGone(other.holder) && this.tryTake(rig, { gone: other.holder });
     }
     if (epoch === null || this.closed) return false;
     this.epochs.set(rigId, { labId, rigId, epoch });
@@ -121,7 +140,7 @@ export class LeaseKeeper {
 
   private waitFor({ labId, rigId }: RigKey): void {
     this.parts.log.warn({ rigId }, 'another server drives the rig; this one takes it over when it ends or its lease has run out');
-    this.waitedFor.set(rigId, { labId, rigId });
+    this.waitedFor.set(rigId, { labId, rigId, seen: null, askedMs: 0, sinceMs: 0 });
     this.retryRegularly();
   }
 
@@ -138,15 +157,17 @@ export class LeaseKeeper {
   private async retry(): Promise<void> {
     const { database, clock, log } = this.parts;
     try {
-      const nowUtcMs = clock.utcMs();
-      for (const { rigId, holder, untilUtcMs } of await leasesOf(database.db, [...this.waitedFor.keys()])) {
+      const askedMs = clock.monotonicMs();
+      for (const seen of await leasesOf(database.db, [...this.waitedFor.keys()])) {
+        const { rigId } = seen;
         const rig = this.waitedFor.get(rigId);
-        const gone = untilUtcMs > nowUtcMs && this.parts.processes.isGone(holder) ? holder : undefined;
-        if (rig === undefined || (untilUtcMs > nowUtcMs && gone === undefined) || !(await this.tryTake(rig, gone))) continue;
+        if (rig === undefined) continue;
+        const why = this.whyTake(rig, seen, askedMs);
+        if (why === null || !(await this.tryTake(rig, why))) continue;
         this.waitedFor.delete(rigId);
         log.warn(
           { rigId, epoch: this.epochs.get(rigId)?.epoch },
-          `the other server ${gone === undefined ? 'let its lease run out' : 'has ended'}; this one takes the rig over`,
+          `the other server ${'gone' in why ? 'has ended' : 'let its lease run out'}; this one takes the rig over`,
         );
         this.parts.onTaken(rig);
       }
@@ -155,14 +176,24 @@ export class LeaseKeeper {
     }
   }
 
+  /** Why a rig that was waited for may be taken now; null where its driver may be alive. */
+  private whyTake(rig: Waiting, lease: SeenLease, askedMs: number): Takeable | null {
+    const { seen } = rig;
+    const stands = seen !== null && seen.holder === lease.holder && seen.epoch === lease.epoch && seen.untilUtcMs === lease.untilUtcMs;
+    rig.sinceMs = stands ? rig.sinceMs + Math.max(0, askedMs - rig.askedMs - longestGapMs) : this.parts.clock.monotonicMs();
+    Object.assign(rig, { seen: lease, askedMs });
+    if (wasGivenBack(lease) || this.parts.processes.isGone(lease.holder)) return { gone: lease.holder };
+    return stands && askedMs - rig.sinceMs >= this.parts.leaseMs ? { still: lease } : null;
+  }
+
   /** A database that does not answer takes no lease away: nobody else can get it there either. */
   private async renew(): Promise<void> {
-    const { database, clock, log, holder, leaseMs } = this.parts;
+    const { database, log, holder, leaseMs } = this.parts;
     if (this.epochs.size === 0) return;
     const held = [...this.epochs.values()];
     this.expectAnswer();
     try {
-      const renewed = await renewRigLeases(database.db, { holder, untilUtcMs: clock.utcMs() + leaseMs });
+      const renewed = await renewRigLeases(database.db, { holder, leaseMs });
       this.answered();
       for (const { labId, rigId } of held) if (!renewed.has(rigId)) this.lose({ labId, rigId });
     } catch (error) {

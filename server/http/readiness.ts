@@ -43,7 +43,7 @@ async function rigsOf(services: Services): Promise<Readiness['rigs']> {
   const { db } = services.database;
   const rigs = (await allRigs(db)).filter(({ document }) => document.motion !== undefined);
   if (services.config.roles.includes('rig')) return rigs.every(({ id }) => services.stations.get(id) !== null) ? 'driving' : 'waiting';
-  const driven = await drivenRigs(db, services.clock.utcMs());
+  const driven = await drivenRigs(db);
   return rigs.every(({ id }) => driven.has(id)) ? 'elsewhere' : 'away';
 }
 

@@ -4,7 +4,8 @@ import type { Cancel, Clock } from '../interfaces/clock';
 import type { ProcessMessage, ProcessPost, RigQuestion, RigReply } from '../interfaces/process-post';
 import type { Connection } from './database';
 import { Pieces, toPieces } from './pieces';
-import { answerQuestion, collectAnswer, driversOf, layQuestion, takeQuestion, withdrawQuestion } from './rig-questions';
+import { driversOf } from './rig-leases';
+import { answerQuestion, collectAnswer, layQuestion, takeQuestion, withdrawQuestion } from './rig-questions';
 
 export interface PostParts {
   /** Name of this process. */
@@ -97,7 +98,7 @@ export class DatabasePost implements ProcessPost {
   }
 
   driversIn(labId: string): Promise<{ rigId: string; process: string }[]> {
-    return driversOf(this.parts.database.db, labId, this.parts.clock.utcMs());
+    return driversOf(this.parts.database.db, labId);
   }
 
   private async connect(): Promise<void> {

@@ -1,5 +1,5 @@
-import { and, eq, gt, isNotNull, isNull, lte } from 'drizzle-orm';
-import { rigLeases, rigQuestions } from '@/db/schema';
+import { and, eq, isNotNull, isNull, lte } from 'drizzle-orm';
+import { rigQuestions } from '@/db/schema';
 import type { RigQuestion, RigReply } from '../interfaces/process-post';
 import type { Handle } from './database';
 
@@ -49,12 +49,4 @@ export async function collectAnswer(db: Handle, key: Key): Promise<RigReply | nu
 /** Removes questions of processes that are gone. */
 export async function sweepQuestions(db: Handle, beforeUtcMs: number): Promise<void> {
   await db.delete(rigQuestions).where(lte(rigQuestions.askedAt, beforeUtcMs));
-}
-
-/** Which process drives which rig of a lab now. */
-export function driversOf(db: Handle, labId: string, nowUtcMs: number): Promise<{ rigId: string; process: string }[]> {
-  return db
-    .select({ rigId: rigLeases.rigId, process: rigLeases.holder })
-    .from(rigLeases)
-    .where(and(eq(rigLeases.labId, labId), gt(rigLeases.untilAt, nowUtcMs)));
 }

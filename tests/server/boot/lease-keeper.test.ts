@@ -3,6 +3,7 @@ import { demoIds, seedDemo } from '@/db/demo/seed';
 import { LeaseKeeper, type LeaseParts } from '@/server/boot/lease-keeper';
 import { RigTaking } from '@/server/boot/take-rigs';
 import { VirtualClock } from '@/server/engine/virtual-clock';
+import type { Clock } from '@/server/interfaces/clock';
 import type { StationRig } from '@/server/interfaces/rig-stations';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { sha256 } from '@/tests/support/lab-server';
@@ -42,7 +43,34 @@ function keeper(holder: string, more: Partial<LeaseParts> = {}): LeaseKeeper {
   });
 }
 
+/** As a process that is killed, and whose end nobody knows of. */
+async function die(driver: LeaseKeeper): Promise<void> {
+  Object.assign(driver, { renew: async () => undefined, renewRegularly: () => undefined });
+  await driver.idle();
+}
+
+/** Until the function that it returns is called the database answers nobody. */
+function databaseAway(): () => void {
+  const { pool } = database().connection;
+  const working = { query: pool.query.bind(pool) };
+  Object.assign(pool, { query: () => Promise.reject(new Error('connect ECONNREFUSED')) });
+  return () => void Object.assign(pool, working);
+}
+
+/**
+ * Sets the clock by which the database's sessions go from now on by so much: `clock_timestamp` of an own schema stands before PostgreSQL's, as its
+ * manual allows where `pg_catalog` is named in the search path ("The System Catalog Schema").
+ */
+async function setDatabaseClock(byMs: number): Promise<void> {
+  await database().connection.pool.query(`
+    create schema if not exists set_clock;
+    create or replace function set_clock.clock_timestamp() returns timestamptz volatile language sql
+      as $$ select pg_catalog.clock_timestamp() + interval '${byMs} milliseconds' $$`);
+}
+
 beforeAll(async () => {
+  const { pool } = database().connection;
+  pool.on('connect', (client) => void client.query('set search_path = set_clock, public, pg_catalog'));
   await seedDemo(database().connection, { nowUtcMs: startUtcMs, hashPassword: async () => 'no password in this test', sha256 });
   countQuestions();
 });
@@ -91,6 +119,62 @@ test('a rig whose driver is gone is taken over when its lease has run out, with 
   await second.close();
 });
 
+/** The clock of a machine whose wall clock is off by so much, set anew while it runs. */
+const offBy = (byMs: () => number): Clock => ({
+  monotonicMs: () => clock.monotonicMs(),
+  utcMs: () => clock.utcMs() + byMs(),
+  after: (delayMs, task) => clock.after(delayMs, task),
+});
+
+describe.each([60_000, -60_000])('two servers whose wall clocks are %i ms apart, and that of PostgreSQL set by as much', (apartMs) => {
+  test('a living driver keeps its rig, and that of a dead one is taken within 5 s', async () => {
+    clock = new VirtualClock(startUtcMs + 9_000_000, settle);
+    const taken: number[] = [];
+    let [drivers, others] = [0, apartMs];
+    const driver = keeper(`driver ${apartMs}`, { clock: offBy(() => drivers) });
+    const standby = keeper(`standby ${apartMs}`, { clock: offBy(() => others), onTaken: () => taken.push(clock.monotonicMs()) });
+    expect(await driver.epochOf(rig)).not.toBeNull();
+    driver.renewRegularly();
+    expect(await standby.epochOf(rig)).toBeNull();
+    await clock.advance(10_000);
+    expect(taken).toEqual([]);
+    [drivers, others] = [apartMs, 0];
+    await setDatabaseClock(apartMs);
+    await clock.advance(10_000);
+    await setDatabaseClock(-apartMs);
+    await clock.advance(10_000);
+    expect([taken, driver.holds(demoIds.rig)]).toEqual([[], true]);
+
+    await die(driver);
+    const diedMs = clock.monotonicMs();
+    await setDatabaseClock(2 * apartMs);
+    await clock.advance(10_000, () => taken.length > 0);
+    expect((taken[0] ?? Infinity) - diedMs).toBeLessThanOrEqual(5_000);
+    await standby.close();
+  });
+});
+
+test('where the database itself stood still the driver has time to renew its lease', async () => {
+  clock = new VirtualClock(startUtcMs + 12_000_000, settle);
+  const taken: number[] = [];
+  const driver = keeper('driver');
+  const standby = keeper('standby', { onTaken: () => taken.push(clock.monotonicMs()) });
+  await driver.epochOf(rig);
+  await standby.epochOf(rig);
+  driver.renewRegularly();
+  await clock.advance(5_000);
+  // Neither the driver's renewals nor the other's looks are answered; then both are, in an order that nobody knows.
+  const back = databaseAway();
+  await clock.advance(20_000);
+  back();
+  await clock.advance(10_000);
+  expect([taken, driver.holds(demoIds.rig)]).toEqual([[], true]);
+  await driver.close();
+  await clock.advance(1_000);
+  expect(taken).toHaveLength(1);
+  await standby.close();
+});
+
 test('the rigs of a process that is known to have ended are taken over at once, by one that waits and by one that comes', async () => {
   clock = new VirtualClock(startUtcMs + 5_400_000, settle);
   const taken: number[] = [];
@@ -117,15 +201,12 @@ test('a database that does not answer for more than 4 s is told of, with the beg
   await one.epochOf(rig);
   one.renewRegularly();
   await clock.advance(5_000);
-  const { pool } = database().connection;
-  const working = { query: pool.query.bind(pool) };
-  const away = () => Promise.reject(new Error('connect ECONNREFUSED'));
-  Object.assign(pool, { query: away });
+  const back = databaseAway();
   await clock.advance(3_500);
   expect(told).toEqual([]);
   await clock.advance(3_000);
   expect(told).toEqual([startUtcMs + 7_200_000 + 6_000]);
-  Object.assign(pool, working);
+  back();
   await clock.advance(1_500);
   expect(told[1]).toBeNull();
   await one.close();

@@ -1,7 +1,17 @@
+import { sql } from 'drizzle-orm';
 import { armRig, currentArm, endArm } from '@/server/store/arms';
 import { createIdempotency, sweepIdempotencyKeys } from '@/server/store/idempotency';
 import { countUse, forgetUses, sweepRateLimits } from '@/server/store/rate-limits';
-import { giveRigLeases, leasesOf, renewRigLeases, takeRigLease } from '@/server/store/rig-leases';
+import {
+  drivenRigs,
+  giveRigLeases,
+  leasesOf,
+  renewRigLeases,
+  takeRigLease,
+  wasGivenBack,
+  type SeenLease,
+  type Takeable,
+} from '@/server/store/rig-leases';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { eveningUtcMs, makeLab, makeRig, makeUser } from './rows';
 
@@ -133,22 +143,35 @@ describe('rig leases', () => {
   test('one holder at a time, each new one with a higher epoch', async () => {
     const lab = await makeLab(db());
     const rigId = await makeRig(db(), lab.id);
-    const take = (holder: string, afterMs: number) =>
-      takeRigLease(db(), { labId: lab.id, rigId, holder, nowUtcMs: eveningUtcMs + afterMs, untilUtcMs: eveningUtcMs + afterMs + 5000 });
-    expect(await take('a', 0)).toBe(1);
-    expect(await take('b', 4999)).toBeNull();
-    expect(await take('a', 4999)).toBe(1);
-    expect(await take('b', 9999)).toBe(2);
-    expect(await take('a', 10_000)).toBeNull();
-    await giveRigLeases(db(), { holder: 'b', nowUtcMs: eveningUtcMs + 10_000 });
-    expect(await leasesOf(db(), [rigId])).toEqual([{ rigId, holder: 'b', untilUtcMs: eveningUtcMs + 10_000 }]);
-    expect(await take('a', 10_000)).toBe(3);
-    expect(await renewRigLeases(db(), { holder: 'a', untilUtcMs: eveningUtcMs + 20_000 })).toEqual(new Set([rigId]));
-    expect(await renewRigLeases(db(), { holder: 'b', untilUtcMs: eveningUtcMs + 30_000 })).toEqual(new Set());
-    expect(await take('b', 19_999)).toBeNull();
-    const evening = { labId: lab.id, rigId, nowUtcMs: eveningUtcMs + 19_999, untilUtcMs: eveningUtcMs + 25_000 };
-    expect(await takeRigLease(db(), { ...evening, holder: 'c', gone: 'b' })).toBeNull();
-    expect(await takeRigLease(db(), { ...evening, holder: 'c', gone: 'a' })).toBe(4);
-    expect(await takeRigLease(db(), { ...evening, holder: 'b', gone: 'a' })).toBeNull();
+    const take = (holder: string, why?: Takeable) => takeRigLease(db(), { labId: lab.id, rigId, holder, leaseMs: 5000, why });
+    const seen = async () => (await leasesOf(db(), [rigId]))[0] as SeenLease;
+    const clock = () => db().execute<{ ms: string }>(sql`select extract(epoch from clock_timestamp()) * 1000 as ms`);
+    const databaseUtcMs = async () => Number((await clock()).rows[0]?.ms);
+
+    const beforeMs = await databaseUtcMs();
+    expect(await take('a')).toBe(1);
+    expect(await take('b')).toBeNull();
+    const first = await seen();
+    expect(first).toMatchObject({ rigId, holder: 'a', epoch: 1 });
+    expect(first.untilUtcMs).toBeGreaterThanOrEqual(beforeMs + 5000);
+    expect(first.untilUtcMs).toBeLessThanOrEqual((await databaseUtcMs()) + 5000);
+    expect(await drivenRigs(db())).toEqual(new Set([rigId]));
+    expect(await take('a')).toBe(1);
+    // It was renewed since it was seen so.
+    expect(await take('b', { still: first })).toBeNull();
+    expect(await take('b', { still: await seen() })).toBe(2);
+    expect(await take('a', { still: first })).toBeNull();
+    expect(await take('a')).toBeNull();
+
+    await giveRigLeases(db(), 'b');
+    expect(wasGivenBack(await seen())).toBe(true);
+    expect(await drivenRigs(db())).toEqual(new Set());
+    expect(await take('a')).toBe(3);
+    expect(wasGivenBack(await seen())).toBe(false);
+    expect(await renewRigLeases(db(), { holder: 'a', leaseMs: 5000 })).toEqual(new Set([rigId]));
+    expect(await renewRigLeases(db(), { holder: 'b', leaseMs: 5000 })).toEqual(new Set());
+    expect(await take('c', { gone: 'b' })).toBeNull();
+    expect(await take('c', { gone: 'a' })).toBe(4);
+    expect(await take('b', { gone: 'a' })).toBeNull();
   });
 });

@@ -98,14 +98,13 @@ test('who drives the rigs of a lab is read from the leases that run', async () =
   );
   const labId = rows[0]?.lab ?? '';
   const ids = [randomUUID(), randomUUID()];
-  const nowUtcMs = new RealClock().utcMs();
   for (const [place, rigId] of ids.entries()) {
     await connection.pool.query('insert into rigs (lab_id, id, name, revision, created_at) values ($1, $2, $3, 1, now())', [
       labId,
       rigId,
       'North',
     ]);
-    await takeRigLease(connection.db, { labId, rigId, holder: 'rig', nowUtcMs, untilUtcMs: nowUtcMs + (place === 0 ? 60_000 : -1) });
+    await takeRigLease(connection.db, { labId, rigId, holder: 'rig', leaseMs: place === 0 ? 60_000 : -1 });
   }
   expect(await (await opened('web')).driversIn(labId)).toEqual([{ rigId: ids[0], process: 'rig' }]);
 });

@@ -3,7 +3,7 @@ import { connect } from '@/db/connect';
 import { runEvents, runSteps } from '@/db/schema';
 import { RigLostError, StaleRunError, type RunWrite } from '@/server/interfaces/run-store';
 import { isPassing } from '@/server/store/failures';
-import { takeRigLease } from '@/server/store/rig-leases';
+import { takeRigLease, type Takeable } from '@/server/store/rig-leases';
 import { createRunStore } from '@/server/store/run-store';
 import { appendEvent, emptyChain, verifyChain, type ChainHead } from '@/shared/archive/chain';
 import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
@@ -125,15 +125,14 @@ test('a writer that does not know the end of the chain is refused and writes not
 test('a process whose rig another has taken over writes nothing more, however well it knows the end of the chain', async () => {
   const start = await freshRun();
   const { labId, rigId } = start;
-  const take = (holder: string, afterMs: number) =>
-    takeRigLease(db(), { labId, rigId, holder, nowUtcMs: eveningUtcMs + afterMs, untilUtcMs: eveningUtcMs + afterMs + 3000 });
+  const take = (holder: string, why?: Takeable) => takeRigLease(db(), { labId, rigId, holder, leaseMs: 3000, why });
   const [frozen, next] = [createRunStore(db(), 'frozen'), createRunStore(db(), 'next')];
   const [first, late] = [event(emptyChain), event(event(emptyChain), { late: true })];
 
-  expect(await take('frozen', 0)).toBe(1);
+  expect(await take('frozen')).toBe(1);
   await frozen.commit(write(start, { events: [first] }));
   await expect(next.commit(write(start, { expectedSeq: 1, events: [late] }))).rejects.toThrow(RigLostError);
-  expect(await take('next', 4000)).toBe(2);
+  expect(await take('next', { gone: 'frozen' })).toBe(2);
   await expect(frozen.commit(write(start, { expectedSeq: 1, events: [late], steps: [step(7)] }))).rejects.toThrow(
     'another process has the rig',
   );
