@@ -5,6 +5,7 @@ import type { ProtocolDocument } from '@/shared/protocol/document';
 import { checkProtocol } from '@/shared/protocol/check';
 import { isShuffled } from '@/shared/protocol/shuffle';
 import { StartRefused } from '../engine/rig-supervisor';
+import type { Transaction } from '../store/database';
 import { enqueueJob } from '../store/jobs';
 import type { MassSetRecord, RigRecord } from '../store/rigs';
 import { insertRun } from '../store/run-store';
@@ -17,6 +18,7 @@ import { rehearsalJobKind, type RehearsalJob } from './work/rehearsal-job';
 import type { Services } from './services';
 import { makeStartChecks, type StartReport } from './start-checks';
 import { busyWords } from './start-checks-lab';
+import { untilStored } from './until-stored';
 
 export interface Caller {
   /** In whose name. */
@@ -32,6 +34,13 @@ export interface Begin {
   /** 0 for the draft of a rehearsal. */
   revision: number;
   notes: string;
+}
+
+/** A start that was decided about beforehand. */
+export interface Claim {
+  runId: string;
+  /** In the transaction that stores the run: whatever it throws, there is no run. */
+  take(tx: Transaction): Promise<void>;
 }
 
 const longestTapMs = 5_000;
@@ -87,7 +96,7 @@ function refusalOfChecks({ checks }: StartReport): ProblemError | null {
 }
 
 /** Starts a run: checks, the row in the database, then the engine. */
-export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSetRecord }): Promise<RunRecord> {
+export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSetRecord; claim?: Claim }): Promise<RunRecord> {
   const { services } = caller;
   const document = { ...begin.rig.document, sources: begin.massSet.sources };
   const refusal = refusalOf(checkProtocol(begin.protocol, document));
@@ -104,6 +113,7 @@ export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSet
   const arm = services.arms.armOf(begin.rig.id);
   const start: RunStart = {
     ...runStartOf(caller, begin, report.shuffleSeed),
+    ...(begin.claim === undefined ? {} : { runId: begin.claim.runId }),
     rig: document,
     massSetLabel: begin.massSet.label,
     simulated: null,
@@ -111,12 +121,20 @@ export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSet
   };
   try {
     services.supervisor.assertMayStart(start);
-    const run = await storeStart(caller, start, { begin, massSetId: begin.massSet.id, finishUtcMs: report.finishUtcMs });
+    const run = await storeStart(caller, start, {
+      begin,
+      massSetId: begin.massSet.id,
+      finishUtcMs: report.finishUtcMs,
+      claim: begin.claim,
+    });
     services.startSeeds.used(run.rigId);
     drive(services, run);
     return run;
   } catch (error) {
-    if (!(error instanceof StartRefused)) throw error;
+    if (!(error instanceof StartRefused)) {
+      if (!(error instanceof ProblemError)) endUnbegun(services, start);
+      throw error;
+    }
     throw new ProblemError(
       error.code,
       error.message,
@@ -128,7 +146,7 @@ export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSet
 async function storeStart(
   caller: Caller,
   start: RunStart,
-  with_: { begin: Begin; massSetId: string; finishUtcMs: number },
+  with_: { begin: Begin; massSetId: string; finishUtcMs: number; claim: Claim | undefined },
 ): Promise<RunRecord> {
   const { services } = caller;
   const { db } = services.database;
@@ -152,6 +170,7 @@ async function storeStart(
       nowUtcMs: services.clock.utcMs(),
       predictedEndUtcMs: with_.finishUtcMs,
     };
+    await with_.claim?.take(tx);
     if (await insertRun(tx, row)) return;
     const other = (await activeRuns(db, start.labId)).get(start.rigId);
     throw new ProblemError(
@@ -162,6 +181,13 @@ async function storeStart(
   const run = await findRun(db, start.labId, start.runId);
   if (run === null) throw new Error('the new run was not found');
   return run;
+}
+
+/** Where the answer of the database was lost the run may be there all the same, which nothing drives: it must not keep its rig. */
+function endUnbegun(services: Services, { labId, runId }: RunStart): void {
+  const why = 'The database went away while the run was started, so it was not begun. Nothing was moved.';
+  const end = () => markRunFailed(services.database.db, { labId, id: runId }, { why, nowUtcMs: services.clock.utcMs() });
+  if (services.supervisor.driverOf(runId) === null) untilStored(services, end, 'the end of a run that was not begun');
 }
 
 function drive(services: Services, run: RunRecord): void {

@@ -6,7 +6,8 @@ import { openHours, type RoomHours } from '@/shared/schedule/plan';
 import { againstRoom, type Stay } from '@/shared/schedule/room';
 import type { Handle } from '../store/database';
 import { findRig, listRigs, type RigRecord } from '../store/rigs';
-import { allSchedules, hoursOfRooms, startsBetween, type ScheduleRecord, type StartRow } from '../store/schedules';
+import { startsBetween, type StartRow } from '../store/schedule-starts';
+import { allSchedules, hoursOfRooms, type ScheduleRecord } from '../store/schedules';
 import { isoOf, isoOrNull } from './maker';
 
 export function scheduleViewOf(schedule: ScheduleRecord): ScheduleView {
@@ -97,7 +98,8 @@ function itemOf(schedule: ScheduleRecord, { occurrence: { dueUtcMs, remark }, ro
     dueAt: isoOf(dueUtcMs),
     endsAt: isoOf(stay.endUtcMs),
     remark,
-    runId: row?.runId ?? null,
+    // A start that was taken has the id of a run that is not there yet.
+    runId: row?.outcome === 'started' ? row.runId : null,
     changedAt: isoOrNull(Math.max(changedAt, row?.decidedAt ?? 0) || null),
   };
   if (row?.outcome != null) return { ...item, state: row.outcome === 'taken' ? 'planned' : row.outcome, why: row.why };

@@ -16,7 +16,8 @@ import {
 } from '../store/mail-requests';
 import { createPasswordReset } from '../store/password-resets';
 import { userByEmail, userById } from '../store/people';
-import { findSchedule, startsBetween } from '../store/schedules';
+import { startsBetween } from '../store/schedule-starts';
+import { findSchedule } from '../store/schedules';
 import { invitationMail, missedStartMail, passwordChangedMail, passwordResetMail, unarmedStartMail } from './mails';
 
 const resetValidMinutes = 30;

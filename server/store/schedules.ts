@@ -1,16 +1,5 @@
-import { and, asc, eq, gte, inArray, isNull, lte, ne } from 'drizzle-orm';
-import {
-  calendarFeeds,
-  labs,
-  massSets,
-  memberships,
-  protocolRevisions,
-  protocols,
-  rigs,
-  roomHours,
-  scheduleStarts,
-  schedules,
-} from '@/db/schema';
+import { and, asc, eq, ne } from 'drizzle-orm';
+import { calendarFeeds, labs, massSets, memberships, protocolRevisions, protocols, rigs, roomHours, schedules } from '@/db/schema';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { RigDocument } from '@/shared/rig/document';
 import { openHours, type RoomHours, type SchedulePlan } from '@/shared/schedule/plan';
@@ -18,7 +7,6 @@ import { one, type Handle } from './database';
 import type { Maker } from './rigs';
 
 export type ScheduleRow = typeof schedules.$inferSelect;
-export type StartRow = typeof scheduleStarts.$inferSelect;
 
 /** A schedule with what it would run. */
 export interface ScheduleRecord extends ScheduleRow {
@@ -123,89 +111,6 @@ export async function setDecidedUntil(db: Handle, { labId, id }: Pick<ScheduleRo
     .update(schedules)
     .set({ decidedUntilAt: utcMs })
     .where(and(eq(schedules.labId, labId), eq(schedules.id, id)));
-}
-
-export interface StartKey {
-  labId: string;
-  scheduleId: string;
-  dueAt: number;
-}
-
-const ofStart = ({ labId, scheduleId, dueAt }: StartKey) =>
-  and(eq(scheduleStarts.labId, labId), eq(scheduleStarts.scheduleId, scheduleId), eq(scheduleStarts.dueAt, dueAt));
-
-/**
- * Decides about one start for good, if nobody has yet. Two servers may look at the same moment: one of them gets true.
- */
-export async function decideStart(
-  db: Handle,
-  start: StartKey,
-  decision: { outcome: NonNullable<StartRow['outcome']>; why: string; nowUtcMs: number },
-): Promise<boolean> {
-  const { outcome, why, nowUtcMs } = decision;
-  const rows = await db
-    .insert(scheduleStarts)
-    .values({ ...start, outcome, why, decidedAt: nowUtcMs })
-    .onConflictDoUpdate({
-      target: [scheduleStarts.labId, scheduleStarts.scheduleId, scheduleStarts.dueAt],
-      set: { outcome, why, decidedAt: nowUtcMs },
-      setWhere: isNull(scheduleStarts.outcome),
-    })
-    .returning({ dueAt: scheduleStarts.dueAt });
-  return rows.length === 1;
-}
-
-/** What became of a start that this server had taken. */
-export async function concludeStart(
-  db: Handle,
-  start: StartKey,
-  end: { outcome: 'started' | 'missed'; why: string; runId: string | null },
-): Promise<void> {
-  await db.update(scheduleStarts).set(end).where(ofStart(start));
-}
-
-/** Takes a skip back; false where the start was not skipped. */
-export async function takeSkipBack(db: Handle, start: StartKey, nowUtcMs: number): Promise<boolean> {
-  const changed = await db
-    .update(scheduleStarts)
-    .set({ outcome: null, why: '', decidedAt: nowUtcMs })
-    .where(and(ofStart(start), eq(scheduleStarts.outcome, 'skipped')));
-  return changed.rowCount === 1;
-}
-
-/** True for the first who announces that a start lacks its arm. */
-export async function announceStart(db: Handle, start: StartKey, nowUtcMs: number): Promise<boolean> {
-  const rows = await db
-    .insert(scheduleStarts)
-    .values({ ...start, announcedAt: nowUtcMs })
-    .onConflictDoUpdate({
-      target: [scheduleStarts.labId, scheduleStarts.scheduleId, scheduleStarts.dueAt],
-      set: { announcedAt: nowUtcMs },
-      setWhere: and(isNull(scheduleStarts.announcedAt), isNull(scheduleStarts.outcome)),
-    })
-    .returning({ dueAt: scheduleStarts.dueAt });
-  return rows.length === 1;
-}
-
-/** What is known of single starts of these schedules in a span, UTC ms. */
-export async function startsBetween(
-  db: Handle,
-  labId: string,
-  { scheduleIds, fromUtcMs, toUtcMs }: { scheduleIds?: readonly string[]; fromUtcMs: number; toUtcMs: number },
-): Promise<StartRow[]> {
-  if (scheduleIds?.length === 0) return [];
-  return db
-    .select()
-    .from(scheduleStarts)
-    .where(
-      and(
-        eq(scheduleStarts.labId, labId),
-        scheduleIds === undefined ? undefined : inArray(scheduleStarts.scheduleId, [...scheduleIds]),
-        gte(scheduleStarts.dueAt, fromUtcMs),
-        lte(scheduleStarts.dueAt, toUtcMs),
-      ),
-    )
-    .orderBy(asc(scheduleStarts.dueAt));
 }
 
 /** Hours of the rooms of a lab's rigs, by rig, and since when they are so; a rig without a row has no limits. */

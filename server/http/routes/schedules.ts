@@ -2,6 +2,7 @@ import * as contracts from '@/shared/contracts/schedules';
 import { formatDayAndClock } from '@/shared/lib/format-time';
 import { occurrencesBetween } from '@/shared/schedule/occurrences';
 import { findRig } from '@/server/store/rigs';
+import * as starts from '@/server/store/schedule-starts';
 import * as store from '@/server/store/schedules';
 import { audited } from '../audited';
 import { calendarOf, scheduleViewOf } from '../calendar';
@@ -67,8 +68,8 @@ const planning = [
     const entry = { kind: body.skipped ? 'schedule.skipped' : 'schedule.skip-taken-back', data: () => ({ ...start, dueAt: body.dueAt }) };
     await audited(context, entry, async (tx) => {
       const done = body.skipped
-        ? await store.decideStart(tx, start, { outcome: 'skipped', why: `Skipped by ${me.name}.`, nowUtcMs })
-        : await store.takeSkipBack(tx, start, nowUtcMs);
+        ? await starts.decideStart(tx, start, { outcome: 'skipped', why: `Skipped by ${me.name}.`, nowUtcMs })
+        : await starts.takeSkipBack(tx, start, nowUtcMs);
       if (!done)
         throw new ProblemError(
           'not-possible-now',
