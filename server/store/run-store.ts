@@ -8,7 +8,7 @@ import type { Database, Handle, Transaction } from './database';
 
 /** Rows of one INSERT: PostgreSQL takes at most 65 535 parameters a statement. */
 const rowsAtOnce = 2000;
-const endedStates: RunState[] = ['finished', 'stopped', 'failed'];
+export const endedStates: RunState[] = ['finished', 'stopped', 'failed'];
 
 export interface NewRun {
   start: RunStart;

@@ -1,11 +1,10 @@
 import { and, asc, desc, eq, gt, inArray, isNull, lt, notInArray, or } from 'drizzle-orm';
 import { channels, runEvents, runs, runSteps } from '@/db/schema';
 import type { ChainedEvent, StepRow } from '@/shared/archive/run-records';
-import type { RunState } from '@/shared/contracts/runs';
 import type { ChannelRecord } from './imports';
 import type { RehearsalRecords } from '../interfaces/heavy-tasks';
 import type { Connection, Database, Handle } from './database';
-import { createRunStore } from './run-store';
+import { createRunStore, endedStates } from './run-store';
 import { lastSampleUtcMs } from './sample-summaries';
 
 const summaryColumns = {
@@ -35,8 +34,6 @@ const summaryColumns = {
 /** What lists show of a run. */
 export type RunListRow = Omit<RunRecord, 'start' | 'snapshot' | 'chartVersion' | 'lastHash'>;
 export type RunRecord = typeof runs.$inferSelect;
-
-const endedStates: RunState[] = ['finished', 'stopped', 'failed'];
 
 export interface RunListQuery {
   labId: string;

@@ -42,6 +42,8 @@ const morning = { ...usual, rings: 'morning', priority: 'medium', answerWithinMi
 const logged = { ...usual, rings: 'never', priority: 'low', answerWithinMin: 24 * hour } as const;
 /** What has to do with the safety of people is never out of sight for long. */
 const grave = { ...always, shelveAtMostMin: hour } as const;
+/** What happens at the rig and ends the motion. */
+const atRig = ['unexpected-motion', 'limit', 'interlock', 'supply', 'controller-reset', 'home-edge'] as const;
 
 const kinds = {
   'unexpected-motion': {
@@ -126,19 +128,7 @@ const kinds = {
     cause: 'The run came to rest and does not go on by itself.',
     consequence: 'No dwell is measured until somebody resumes.',
     answer: 'Read why, put it right, and resume from the run screen; or leave it held until the morning.',
-    followsFrom: [
-      ...[
-        'unexpected-motion',
-        'limit',
-        'interlock',
-        'supply',
-        'controller-reset',
-        'proof-failed',
-        'home-edge',
-        'no-response',
-        'no-deflection',
-      ],
-    ],
+    followsFrom: [...atRig, 'proof-failed', 'no-response', 'no-deflection', 'not-driven'],
   },
   'ended-early': {
     ...always,
@@ -148,7 +138,7 @@ const kinds = {
     cause: 'The run failed, or its protocol stopped it after an interruption.',
     consequence: 'The rest of the night is not measured. Nothing moves.',
     answer: 'Read why on the run screen. Start anew if the rig is sound and the night is long enough.',
-    followsFrom: ['unexpected-motion', 'limit', 'interlock', 'supply', 'controller-reset', 'home-edge', 'held'],
+    followsFrom: [...atRig, 'held', 'not-driven'],
   },
   'not-taken-up': {
     ...always,
@@ -156,6 +146,17 @@ const kinds = {
     cause: 'An unfinished run was written by a version that this server does not know, or the database refuses what it has to save.',
     consequence: 'Nothing is done with it, and its rig stays blocked until somebody decides.',
     answer: 'Read the reason; start the server version that wrote it, or give the run up on its screen.',
+  },
+  'not-driven': {
+    ...always,
+    offDelayS: 0,
+    title: 'Nobody drives the rig',
+    cause:
+      'The process that drove the rig has ended or hangs, and none has taken it over within a minute, while a run has not ended, an arm stands or a start is near.',
+    consequence:
+      'The controller holds by itself. Nothing is measured by the protocol and no other alarm of the rig is found; a start will be missed. No sign of life is sent.',
+    answer:
+      'Look at the computer of the rig and at the server there: is it on, does it run, does it reach the database? It takes its runs up by itself when it is back.',
   },
   'link-lost': {
     ...logged,

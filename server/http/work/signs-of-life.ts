@@ -1,13 +1,26 @@
 import { reportCondition } from '../../store/alarms';
 import { noteSign, watcherOf, watchers, type Watcher } from '../../store/calls';
 import type { Services } from '../services';
+import { heedLeftRigs } from './left-rigs';
 
-/** A dead server tells nobody that it is dead: an outside watcher of the lab's choice hears each minute that it lives. */
+/**
+ * A dead server tells nobody that it is dead: an outside watcher of the lab's choice hears each minute that it lives. While nobody drives a rig that
+ * somebody counts on, the lab sends no sign.
+ */
 
 /** Sends each lab's sign, all at once: a watcher that hangs keeps no other waiting. */
 export async function sendSigns(services: Services): Promise<void> {
-  await Promise.all((await watchers(services.database.db)).map((watcher) => sendSign(services, watcher)));
+  const left = await heedLeftRigs(services);
+  await Promise.all(
+    (await watchers(services.database.db)).map((watcher) => {
+      const why = left.get(watcher.labId);
+      return why === undefined ? sendSign(services, watcher) : withhold(services, watcher, why);
+    }),
+  );
 }
+
+const withhold = ({ database, clock }: Services, watcher: Watcher, why: string): Promise<void> =>
+  noteSign(database.db, watcher, { at: clock.utcMs(), ok: false, detail: `not sent: ${why}` });
 
 /** Sends one sign and notes what became of it. */
 export async function sendSign(services: Services, watcher: Watcher): Promise<void> {
