@@ -9,7 +9,7 @@ import { filesInUse, type KeptFile } from '../store/files';
 import { readAll } from '../ingest/receive-file';
 import { unspoilt } from '../ingest/unspoilt';
 import type { ServerConfig } from '../interfaces/server-config';
-import { otherConnections, tablesOf, wipe } from '../store/whole-database';
+import { endWhatIsGone, otherConnections, tablesOf, wipe } from '../store/whole-database';
 import { headsFileName } from './audit-anchor';
 import { verifyLabAudit } from './audit-verify';
 import { ConfigError, readConfig } from './config';
@@ -131,13 +131,19 @@ const isThere = (path: string): Promise<boolean> =>
 export interface Restored {
   at: string;
   labs: { name: string; entries: number }[];
+  /** Arms that stood in the backup: none stands now. */
+  armsEnded: number;
 }
 
 /**
  * Puts a backup in place of what the database and the state folder hold.
  * @throws UnusableBackup when the file is none, a server still runs, or the database is not empty and `replace` was not asked for
  */
-export async function restore(file: string, place: Place, { replace = false } = {}): Promise<Restored> {
+export async function restore(
+  file: string,
+  place: Place,
+  { replace = false, nowUtcMs }: { replace?: boolean; nowUtcMs: number },
+): Promise<Restored> {
   const { databaseUrl, stateDir } = place;
   const folder = await mkdtemp(join(dirname(resolve(file)), '.evenfall-restore-'));
   const connection = connect({ url: databaseUrl, maxConnections: 1, statementTimeoutMs: 600_000 });
@@ -157,9 +163,11 @@ export async function restore(file: string, place: Place, { replace = false } = 
     const env = postgresEnvironment(databaseUrl);
     const options = ['--no-owner', '--no-privileges', '--exit-on-error', '--single-transaction', `--dbname=${env.PGDATABASE ?? ''}`];
     await runProgram(postgresProgram('pg_restore'), [...options, join(folder, dumpName)], env);
+    const tables = await cameBack(connection, description);
+    const armsEnded = await endWhatIsGone(connection.db, { tables, nowUtcMs, sha256: sha256Hex });
     await putFiles(place, description.files, join(folder, filesName));
     await putState(join(folder, stateName), stateDir);
-    return { at: description.at, labs: await checked(connection, description) };
+    return { at: description.at, labs: await followChains(connection), armsEnded };
   } finally {
     await connection.close();
     await rm(folder, { recursive: true, force: true });
@@ -195,11 +203,15 @@ async function putState(from: string, stateDir: string): Promise<void> {
   for (const name of await readdir(from)) await cp(join(from, name), join(stateDir, name), { recursive: true });
 }
 
-/** What was restored is what was kept: as many rows in each table, and every audit chain whole. */
-async function checked({ db }: Connection, { rows }: z.infer<typeof descriptionSchema>): Promise<Restored['labs']> {
+/** What was restored is what was kept: as many rows in each table. */
+async function cameBack({ db }: Connection, { rows }: z.infer<typeof descriptionSchema>): Promise<ReadonlySet<string>> {
   const now = new Map(await tablesOf(db));
   const lost = Object.entries(rows).filter(([table, count]) => now.get(table) !== count);
   if (lost.length > 0) throw new UnusableBackup(`not all rows came back: ${lost.map(([table]) => table).join(', ')}`);
+  return new Set(now.keys());
+}
+
+async function followChains({ db }: Connection): Promise<Restored['labs']> {
   const labs: Restored['labs'] = [];
   for (const lab of await auditHeads(db)) {
     const { entries, why } = await verifyLabAudit(db, lab);
@@ -237,7 +249,7 @@ export async function main(
       if (lost.length === 0) return 0;
       output.err(`backup: all else is kept, but these files could not be read whole: ${lost.join(', ')}\n`);
       return 2;
-    } else output.out(`${JSON.stringify(await restore(file, place, { replace: rest.includes('--replace') }), null, 2)}\n`);
+    } else output.out(`${JSON.stringify(await restore(file, place, { replace: rest.includes('--replace'), nowUtcMs }), null, 2)}\n`);
     return 0;
   } catch (error) {
     if (!(error instanceof UnusableBackup) && !(error instanceof ConfigError)) throw error;

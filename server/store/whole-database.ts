@@ -1,5 +1,8 @@
-import { sql } from 'drizzle-orm';
-import type { Handle } from './database';
+import { isNull, lt, sql } from 'drizzle-orm';
+import { arms, schedules } from '@/db/schema';
+import type { Sha256 } from '@/shared/archive/chain';
+import { appendAudit } from './audit';
+import type { Database, Handle } from './database';
 
 /** What backup and restore have to know of the database as a whole. */
 
@@ -31,4 +34,35 @@ export async function wipe(db: Handle): Promise<void> {
   await db.execute(sql`drop schema if exists public cascade`);
   await db.execute(sql`drop schema if exists drizzle cascade`);
   await db.execute(sql`create schema public`);
+}
+
+const PUT_BACK = 'a backup was put back';
+
+/**
+ * What was given for a time that is gone: every arm of a restored database is ended, with an entry in the audit chain, and no start of before now is
+ * told to be missed. `tables`: those that the backup has, which an older version may have made. Returns how many arms were ended.
+ */
+export function endWhatIsGone(
+  db: Database,
+  { tables, nowUtcMs, sha256 }: { tables: ReadonlySet<string>; nowUtcMs: number; sha256: Sha256 },
+): Promise<number> {
+  return db.transaction(async (tx) => {
+    const ended = await tx
+      .update(arms)
+      .set({ endedAt: nowUtcMs, endedWhy: PUT_BACK })
+      .where(isNull(arms.endedAt))
+      .returning({ labId: arms.labId, rigId: arms.rigId });
+    for (const { labId, rigId } of ended) {
+      const fact = {
+        labId,
+        who: { id: null, name: 'the restore' },
+        kind: 'rig.arm-ended',
+        data: { rigId, why: PUT_BACK },
+        utcMs: nowUtcMs,
+      };
+      await appendAudit(tx, fact, sha256);
+    }
+    if (tables.has('schedules')) await tx.update(schedules).set({ decidedUntilAt: nowUtcMs }).where(lt(schedules.decidedUntilAt, nowUtcMs));
+    return ended.length;
+  });
 }

@@ -2,12 +2,16 @@ import { mkdirSync, mkdtempSync, readFileSync, rmSync, statSync, writeFileSync }
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { sql } from 'drizzle-orm';
-import { demoIds, seedDemo } from '@/db/demo/seed';
+import { demoIds, demoPeople, seedDemo } from '@/db/demo/seed';
 import { connect } from '@/db/connect';
 import { anchorAudit } from '@/server/boot/audit-anchor';
 import { main, type Restored } from '@/server/boot/backup';
 import { main as verifyAudit } from '@/server/boot/audit-verify';
+import { armRig, currentArm, newestArm } from '@/server/store/arms';
+import { auditPage } from '@/server/store/audit';
 import { createSampleStore } from '@/server/store/sample-store';
+import { findSchedule, insertSchedule } from '@/server/store/schedules';
+import type { SchedulePlan } from '@/shared/schedule/plan';
 import { tablesOf } from '@/server/store/whole-database';
 import { FakeS3 } from '@/tests/support/fake-s3';
 import { freshDatabase, type TestDatabase } from '@/tests/support/database';
@@ -63,12 +67,12 @@ async function keepFile(name: string, text: string): Promise<void> {
 }
 
 const run = (database: TestDatabase, stateDir: string, ...args: string[]) =>
-  runWith({ DATABASE_URL: database.url, EVENFALL_STATE_DIR: stateDir }, ...args);
+  runWith({ DATABASE_URL: database.url, EVENFALL_STATE_DIR: stateDir }, args);
 
-async function runWith(environment: Record<string, string>, ...args: string[]) {
+async function runWith(environment: Record<string, string>, args: string[], atUtcMs = nowUtcMs) {
   const said = { out: '', err: '' };
   const output = { out: (text: string) => void (said.out += text), err: (text: string) => void (said.err += text) };
-  const code = await main(args, environment, { output, nowUtcMs });
+  const code = await main(args, environment, { output, nowUtcMs: atUtcMs });
   return { code, ...said };
 }
 
@@ -115,6 +119,39 @@ test('it is put back into an empty database: every row, the files that were brou
   expect(await verifyAudit({ DATABASE_URL: other.url, EVENFALL_STATE_DIR: states.other }, silent)).toBe(0);
 });
 
+test('an arm of the time of the backup is ended, in the audit chain too, and no start of the time between is told to be missed', async () => {
+  const { db } = lab.connection;
+  const ownerId = demoPeople.find(({ role }) => role === 'owner')?.id ?? '';
+  const arm = { labId: demoIds.lab, rigId: demoIds.rig, name: 'Ilse Marrowby', note: '', armedById: ownerId, bootId: '7' };
+  await db.transaction((tx) => armRig(tx, { ...arm, nowUtcMs, untilUtcMs: nowUtcMs + 40 * 3_600_000 }));
+  const plan: SchedulePlan = { kind: 'weekly', days: ['fri', 'sat', 'sun'], time: '22:00', from: '2031-02-14', until: null };
+  const maker = { userId: ownerId, name: 'Ilse Marrowby', at: nowUtcMs };
+  const { lab: labId, rig: rigId, shortProtocol: protocolId, massSet: massSetId } = demoIds;
+  const scheduleId = await insertSchedule(db, { labId, rigId, protocolId, protocolRevision: 1, massSetId, plan, notes: '' }, maker);
+  const armed = join(folder, 'armed.tar.gz');
+  expect(await run(lab, states.lab, 'backup', armed)).toMatchObject({ code: 0 });
+
+  // A night later; the door was opened meanwhile, and what ended the arm is in no backup.
+  const laterUtcMs = nowUtcMs + 20 * 3_600_000;
+  const said = await runWith({ DATABASE_URL: other.url, EVENFALL_STATE_DIR: states.other }, ['restore', armed, '--replace'], laterUtcMs);
+  expect(said).toMatchObject({ code: 0, err: '' });
+  const restored = JSON.parse(said.out) as Restored;
+  expect(restored).toMatchObject({ armsEnded: 1, labs: [{ entries: 2 }] });
+  const again = connect({ url: other.url, maxConnections: 1 });
+  const where = { labId: demoIds.lab, rigId: demoIds.rig };
+  expect(await currentArm(again.db, { ...where, nowUtcMs: laterUtcMs })).toBeNull();
+  expect(await newestArm(again.db, where)).toMatchObject({ endedAt: laterUtcMs, endedWhy: 'a backup was put back' });
+  expect((await auditPage(again.db, { labId: demoIds.lab, beforeSeq: null, limit: 1 }))[0]).toMatchObject({
+    kind: 'rig.arm-ended',
+    at: new Date(laterUtcMs).toISOString(),
+    data: { rigId: demoIds.rig, why: 'a backup was put back', who: { id: null, name: 'the restore' } },
+  });
+  expect(await findSchedule(again.db, demoIds.lab, scheduleId)).toMatchObject({ state: 'active', decidedUntilAt: laterUtcMs });
+  await again.close();
+  const silent = { out: () => undefined, err: () => undefined };
+  expect(await verifyAudit({ DATABASE_URL: other.url, EVENFALL_STATE_DIR: states.other }, silent)).toBe(0);
+});
+
 test('files go from a folder into a bucket where that is configured at the restore, and from there into the next backup', async () => {
   const fake = new FakeS3();
   const place = { EVENFALL_S3_BUCKET: 'nights', EVENFALL_S3_ENDPOINT: await fake.listen() };
@@ -125,10 +162,10 @@ test('files go from a folder into a bucket where that is configured at the resto
     DATABASE_URL: other.url,
     EVENFALL_STATE_DIR: states.other,
   };
-  expect(await runWith(bucket, 'restore', file, '--replace')).toMatchObject({ code: 0, err: '' });
+  expect(await runWith(bucket, ['restore', file, '--replace'])).toMatchObject({ code: 0, err: '' });
   expect(fake.kept.get('/nights/imports/night')?.toString()).toBe(broughtIn);
   const again = join(folder, 'again.tar.gz');
-  const said = await runWith(bucket, 'backup', again);
+  const said = await runWith(bucket, ['backup', again]);
   expect(said).toMatchObject({ code: 0, err: '' });
   expect(JSON.parse(said.out)).toMatchObject({ files: 2 });
   await fake.close();
