@@ -3,7 +3,7 @@ import { View } from 'react-native';
 import { useLab } from '@/components/api';
 import { Body, Icon, Label, Panel, ProblemNotice, Section } from '@/components/ui';
 import { formatClock } from '@/shared/lib/format-time';
-import { isSamePicture, usualRegion } from '@/shared/spot/setting';
+import { isSamePicture, usualRegion, type SpotSetting } from '@/shared/spot/setting';
 import { CameraChoice } from './device-screen';
 import { PictureView } from './picture-view';
 import type { CameraState } from './spot-reader';
@@ -14,9 +14,8 @@ export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: 
   const { reader, view, setting, change, place } = page;
   const { picture, spot } = view;
   const isOpen = view.camera.kind === 'open' || view.camera.kind === 'lost';
-  const opened = view.camera.kind === 'open' ? view.camera.id : null;
   useEffect(() => {
-    if (opened !== null && opened !== setting.cameraId) change({ cameraId: opened });
+    if (view.camera.kind === 'open' && view.camera.id !== setting.cameraId) change(nowKnownAs(view.camera, setting));
     if (picture !== null && setting.region === null) change({ region: usualRegion(picture), picture });
   });
   const marksFit = setting.picture === null || (picture !== null && isSamePicture(setting.picture, picture));
@@ -52,6 +51,12 @@ export function CameraPanel({ page, linePx, onLine }: { page: SpotPage; linePx: 
       ) : null}
     </Section>
   );
+}
+
+/** What was marked in its picture stays marked where the browser only gave the camera another id. */
+function nowKnownAs({ id, name, before }: CameraState & { kind: 'open' }, { picture }: SpotSetting): Partial<SpotSetting> {
+  const marked = picture !== null && before !== null && picture.cameraId === before ? { picture: { ...picture, cameraId: id } } : {};
+  return { cameraId: id, cameraName: name, ...marked };
 }
 
 function CameraNotice({ camera }: { camera: CameraState }) {

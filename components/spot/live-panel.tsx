@@ -5,13 +5,13 @@ import { formatDuration } from '@/shared/lib/format-duration';
 import { formatFixed, formatPercent, formatSignificant, NARROW_SPACE } from '@/shared/lib/format-number';
 import { formatClock } from '@/shared/lib/format-time';
 import { formatUncertain } from '@/shared/lib/format-uncertain';
-import { usualLimits } from '@/shared/spot/buffer';
+import { countOfOthers, heldPieces, usualLimits, type SpotBuffer } from '@/shared/spot/buffer';
 import type { ReaderView } from './spot-reader';
 
 const px = (value: number | null) => (value === null ? '–' : `${formatSignificant(value, 2)}${NARROW_SPACE}px`);
 
 /** Position, rate, noise, and what became of the samples. */
-export function LivePanel({ view }: { view: ReaderView }) {
+export function LivePanel({ view, channel }: { view: ReaderView; channel: string }) {
   const { spot, figures, health, sender } = view;
   const last = health.recent.at(-1);
   return (
@@ -32,9 +32,9 @@ export function LivePanel({ view }: { view: ReaderView }) {
             value={view.clockUMs === null ? 'not known' : `± ${formatSignificant(view.clockUMs, 2)}${NARROW_SPACE}ms`}
           />
           <Fact name="Stored" value={`${sender.buffer.stored} samples`} testID="spot-stored" />
-          <Fact name="Waiting" value={`${sender.buffer.held} samples`} testID="spot-waiting" />
+          <Fact name="Waiting" value={`${sender.buffer.held} samples, ${sender.kept} of them on the device`} testID="spot-waiting" />
         </View>
-        <SenderWords view={view} />
+        <SenderWords view={view} channel={channel} />
       </Panel>
       <Warnings warnings={view.warnings} />
     </Section>
@@ -59,7 +59,7 @@ function Fact({ name, value, testID }: { name: string; value: string; testID?: s
 }
 
 /** What the network did to the samples, and where there are gaps. */
-function SenderWords({ view: { sender, gaps } }: { view: ReaderView }) {
+function SenderWords({ view: { sender, gaps }, channel }: { view: ReaderView; channel: string }) {
   const { timeZone } = useLab();
   const clock = (utcMs: number) => formatClock(utcMs, { timeZone, precision: 'seconds' });
   const { dropped, held } = sender.buffer;
@@ -67,14 +67,24 @@ function SenderWords({ view: { sender, gaps } }: { view: ReaderView }) {
     <>
       {sender.trouble === null ? null : (
         <Body role="status" tone="danger" testID="spot-trouble">
-          Not stored yet: {sender.trouble} {held} samples wait on this page and are sent again; it holds{' '}
-          {formatFixed(usualLimits.most, { decimals: 0 })} of them, {holdsWords}.
+          Not stored yet: {sender.trouble} {held} samples wait on this {sender.unkept === null ? 'device' : 'page'} and are sent again; it
+          holds {formatFixed(usualLimits.most, { decimals: 0 })} of them, {holdsWords}. Then the oldest go.
         </Body>
       )}
+      {sender.unkept === null ? null : (
+        <Body role="status" tone="danger" testID="spot-unkept">
+          This browser keeps nothing on the device ({sender.unkept}): what waits is lost when the page is closed. Open it in a usual window,
+          not a private one, and make room on the disk.
+        </Body>
+      )}
+      {sender.found === 0 ? null : (
+        <Label testID="spot-found">A page before this one left {sender.found} samples on this device; they are sent first.</Label>
+      )}
+      <OfOthers buffer={sender.buffer} channel={channel} />
       {dropped === null ? null : (
         <Body role="status" tone="danger" testID="spot-dropped">
           {dropped.count} samples between {clock(dropped.fromUtcMs)} and {clock(dropped.toUtcMs)} were dropped
-          {sender.refused === null ? ': the server was away for longer than this page can hold' : `: ${sender.refused}`}
+          {sender.refused === null ? ': the server was away for longer than this device holds' : `: ${sender.refused}`}
         </Body>
       )}
       {gaps.length === 0 ? null : (
@@ -84,6 +94,18 @@ function SenderWords({ view: { sender, gaps } }: { view: ReaderView }) {
         </Label>
       )}
     </>
+  );
+}
+
+/** What waits for another channel than the one that is chosen. */
+function OfOthers({ buffer, channel }: { buffer: SpotBuffer; channel: string }) {
+  const count = countOfOthers(buffer, channel);
+  if (count === 0) return null;
+  const names = [...new Set(heldPieces(buffer).map((piece) => piece.channel))].filter((name) => name !== channel);
+  return (
+    <Body role="status" testID="spot-others">
+      {count} samples of {names.join(', ')} wait until that channel is chosen again, with a token that may fill it.
+    </Body>
   );
 }
 

@@ -23,7 +23,8 @@ export interface SpotPlan {
 export type CameraState =
   | { kind: 'closed' }
   | { kind: 'opening' }
-  | { kind: 'open'; name: string; id: string; free: string[] }
+  /** `before`: the id that it had until the browser gave it this one. */
+  | { kind: 'open'; name: string; id: string; before: string | null; free: string[] }
   /** It was open and is away; it is looked for again and again. */
   | { kind: 'lost'; why: string; sinceUtcMs: number }
   | { kind: 'refused'; why: string };
@@ -79,6 +80,7 @@ export class SpotReader {
   private camera: CameraState = { kind: 'closed' };
   private open: OpenCamera | null = null;
   private wantedId: string | null = null;
+  private wantedName: string | null = null;
   private picture: MarkedPicture | null = null;
   private health: SpotHealth = noFrames;
   private stamped: 'capture' | 'shown' = 'capture';
@@ -106,6 +108,7 @@ export class SpotReader {
   async openCamera(id: string | null): Promise<void> {
     this.closeCamera();
     this.wantedId = id;
+    this.wantedName = null;
     this.health = noFrames;
     this.camera = { kind: 'opening' };
     const { wish } = this;
@@ -129,6 +132,16 @@ export class SpotReader {
     this.sending = true;
     this.keptMs = this.parts.nowMs();
     this.parts.device.keepAwake();
+  }
+
+  /** Goes on with the reading of a page before this one: its camera is looked for until it is there. */
+  resume(camera: { id: string | null; name: string | null }): void {
+    this.closeCamera();
+    this.wantedId = camera.id;
+    this.wantedName = camera.name;
+    this.camera = { kind: 'lost', why: 'The page was loaded anew.', sinceUtcMs: this.utcNowMs() };
+    this.dueMs.reopen = this.parts.nowMs();
+    this.begin();
   }
 
   /** Nothing more is kept; what waits is still sent. */
@@ -192,21 +205,33 @@ export class SpotReader {
 
   private async opened(): Promise<void> {
     const { wish } = this;
-    const open = await this.parts.camera.open(this.wantedId, { frame: (frame) => this.seen(frame), ended: () => this.lost() });
+    const id = await this.idNow();
+    const open = await this.parts.camera.open(id, { frame: (frame) => this.seen(frame), ended: () => this.lost() });
     if (wish !== this.wish) {
       open.close();
       return;
     }
     this.open = open;
     // The same camera again, never another one that happens to be there: its picture would show another place.
+    const before = id === this.wantedId ? null : this.wantedId;
     this.wantedId = open.id === '' ? this.wantedId : open.id;
-    this.camera = { kind: 'open', name: open.name, id: open.id, free: [] };
+    this.wantedName = open.name;
+    this.camera = { kind: 'open', name: open.name, id: open.id, before, free: [] };
     this.dueMs.hold = this.parts.nowMs() + settleMs;
+  }
+
+  /** Some browsers give a camera another id in each session: it is known again by its name, where only one bears that. */
+  private async idNow(): Promise<string | null> {
+    const { wantedId, wantedName } = this;
+    if (wantedId === null || wantedName === null) return wantedId;
+    const there = await this.parts.camera.list();
+    const named = there.filter(({ name }) => name === wantedName);
+    return there.some(({ id }) => id === wantedId) || named.length !== 1 ? wantedId : (named[0]?.id ?? wantedId);
   }
 
   private async hold(open: OpenCamera): Promise<void> {
     const free = await open.holdSettings();
-    if (this.open === open) this.camera = { kind: 'open', name: open.name, id: open.id, free };
+    if (this.open === open && this.camera.kind === 'open') this.camera = { ...this.camera, free };
   }
 
   private lost(): void {
@@ -260,7 +285,7 @@ export class SpotReader {
     if (reading.kind !== 'spot' || scale === null || this.clock === null || !fits) return;
     if (this.keptMs !== null && frame.capturedMs - this.keptMs > gapMs) this.noteGap(this.keptMs, frame.capturedMs);
     this.keptMs = frame.capturedMs;
-    this.parts.sender.take({ utcMs: utcMsAt(this.clock, frame.capturedMs), mm: mmAt(scale, reading.px) });
+    this.parts.sender.take(this.plan.target.channel, { utcMs: utcMsAt(this.clock, frame.capturedMs), mm: mmAt(scale, reading.px) });
   }
 
   private noteGap(fromMs: number, toMs: number): void {

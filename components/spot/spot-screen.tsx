@@ -33,7 +33,7 @@ export function SpotScreen() {
       }
     >
       <CameraPanel page={page} linePx={linePx} onLine={setLinePx} />
-      <LivePanel view={page.view} />
+      <LivePanel view={page.view} channel={page.setting.channel} />
       {black ? <BlackScreen view={page.view} onClose={() => setBlack(false)} /> : null}
     </DeviceScreen>
   );
@@ -56,14 +56,14 @@ function stillToDo({ view, setting }: SpotPage): string[] {
 }
 
 function Acts({ page, onBlack }: { page: SpotPage; onBlack: () => void }) {
-  const { view, reader } = page;
+  const { view } = page;
   return (
     <DeviceActs
       sending={view.sending}
       missing={stillToDo(page)}
       missingTestID="spot-missing"
-      begin={{ label: 'Begin to read', onPress: () => reader.begin(), testID: 'begin-reading' }}
-      end={{ label: 'End the reading', onPress: () => reader.end(), testID: 'end-reading' }}
+      begin={{ label: 'Begin to read', onPress: page.begin, testID: 'begin-reading' }}
+      end={{ label: 'End the reading', onPress: page.end, testID: 'end-reading' }}
       beside={<Button size="action" label="Black screen" className="flex-1" onPress={onBlack} testID="go-black" />}
     />
   );

@@ -6,6 +6,7 @@ import { fitScale } from '@/shared/spot/scale';
 import type { SpotSetting } from '@/shared/spot/setting';
 import { browserCamera } from './camera';
 import { watchDevice } from './device-watch';
+import { devicePieces } from './kept-pieces';
 import { KeptSetting } from './kept-setting';
 import { SpotReader, type ReaderView, type SpotPlan } from './spot-reader';
 import { SpotSender } from './spot-sender';
@@ -24,6 +25,8 @@ export interface SpotPage {
   view: ReaderView;
   setting: SpotSetting;
   change(part: Partial<SpotSetting>): void;
+  begin(): void;
+  end(): void;
 }
 
 /** How often the reader is stepped and the page drawn, ms; no answer to a batch within `answerMs` is none. */
@@ -59,11 +62,13 @@ function makeReader(rigId: string) {
   const kept = new KeptSetting(rigId);
   const place = new VideoPlace();
   const device = watchDevice();
+  // No page before this one can have given such an id, for none measures a thousand pieces in a millisecond.
+  const sender = new SpotSender({ send: sendBatch, keep: devicePieces(rigId), firstId: deviceNowMs() * 1000, nowMs: monotonicMs });
   const reader = new SpotReader(
     {
       camera: browserCamera(() => place.element),
       device,
-      sender: new SpotSender({ send: sendBatch, nowMs: monotonicMs }),
+      sender,
       askTime,
       nowMs: monotonicMs,
       deviceUtcMs: deviceNowMs,
@@ -73,32 +78,45 @@ function makeReader(rigId: string) {
   const end = () => {
     reader.closeCamera();
     device.end();
+    void sender.keepUp();
   };
-  return { kept, place, reader, end };
+  return { kept, place, reader, sender, end };
 }
 
 /** The reader of a rig with its setting, which the device remembers. It lives as long as the page. */
 export function useSpotReader(rigId: string): SpotPage {
-  const [{ kept, place, reader, end }] = useState(() => makeReader(rigId));
+  const [{ kept, place, reader, sender, end }] = useState(() => makeReader(rigId));
   const [setting, setSetting] = useState(kept.now);
   const [view, setView] = useState(() => reader.view());
   useEffect(() => {
+    if (kept.now.reading) reader.resume({ id: kept.now.cameraId, name: kept.now.cameraName });
     const timer = setInterval(() => {
       void reader.step();
       setView(reader.view());
     }, stepMs);
+    const keep = () => void sender.keepUp();
+    window.addEventListener('pagehide', keep);
     return () => {
       clearInterval(timer);
+      window.removeEventListener('pagehide', keep);
       end();
     };
-  }, [reader, end]);
-  useStaysOpen(view.sending || view.sender.buffer.held > 0);
+  }, [kept, reader, sender, end]);
+  useStaysOpen(view.sending || (view.sender.unkept !== null && view.sender.buffer.held > 0));
   const change = (part: Partial<SpotSetting>) => {
     const next = kept.change(part);
     setSetting(next);
     reader.use(planOf(next));
   };
-  return { place, reader, view, setting, change };
+  const begin = () => {
+    reader.begin();
+    change({ reading: true });
+  };
+  const stop = () => {
+    reader.end();
+    change({ reading: false });
+  };
+  return { place, reader, view, setting, change, begin, end: stop };
 }
 
 /** The browser asks before it closes the page. */

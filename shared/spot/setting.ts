@@ -8,6 +8,7 @@ const wholePx = z.number().int().nonnegative();
 
 export const spotSettingSchema = z.strictObject({
   cameraId: z.string().nullable(),
+  cameraName: z.string().nullable().default(null),
   /** The pictures that region and marks belong to: of one camera, in one size, px. */
   picture: z.strictObject({ cameraId: z.string(), width: wholePx, height: wholePx }).nullable(),
   region: z.strictObject({ left: wholePx, top: wholePx, width: wholePx, height: wholePx }).nullable(),
@@ -19,12 +20,15 @@ export const spotSettingSchema = z.strictObject({
   channel: z.string(),
   /** Token of a device that may fill the channel. */
   token: z.string(),
+  /** Whether it was reading: a page that is loaded anew goes on. */
+  reading: z.boolean().default(false),
 });
 export type MarkedPicture = NonNullable<z.infer<typeof spotSettingSchema>['picture']>;
 export type SpotSetting = z.infer<typeof spotSettingSchema>;
 
 export const freshSetting: SpotSetting = {
   cameraId: null,
+  cameraName: null,
   picture: null,
   region: null,
   of: 'centre',
@@ -33,6 +37,7 @@ export const freshSetting: SpotSetting = {
   uMarkMm: 0.2,
   channel: '',
   token: '',
+  reading: false,
 };
 
 /** Whether a text can be the token of a device. */

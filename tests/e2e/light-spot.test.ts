@@ -91,18 +91,45 @@ chapter('every sample is where the spot was, to 0.05 px rms', async () => {
   expect(rms).toBeLessThan(0.05);
 });
 
+chapter('the network is cut and the page breaks down: another page sends what waited, in order and once, and goes on reading', async () => {
+  await hand.taps('begin-reading');
+  await hand.at('end-reading').waitFor();
+  await hand.context.setOffline(true);
+  const waiting = async () => Number(/(\d+) of them on the device/.exec(await hand.reads('spot-waiting', 'on the device'))?.[1]);
+  await until(async () => (await waiting()) >= 40, 'samples to wait on the device');
+  await hand.reads('spot-trouble', /wait on this device and are sent again; it holds 432 000 of them/);
+  await hand.shoots('light-spot-offline');
+  const waited = await waiting();
+  const cutAt = Date.now();
+  await hand.page.close();
+  await hand.context.setOffline(false);
+  hand.browser.page = await hand.context.newPage();
+  await hand.goes(page, 'spot-screen');
+  const found = Number(/left (\d+) samples/.exec(await hand.reads('spot-found', 'sent first'))?.[1]);
+  expect(found).toBeGreaterThanOrEqual(waited);
+  // Nobody pressed anything: the camera is opened and what it shows is read.
+  await hand.at('end-reading').waitFor();
+  const stored = async () => Number(/^(\d+)/.exec(await hand.reads('spot-stored', 'samples'))?.[1]);
+  await until(async () => (await stored()) > found, 'more than was left to be stored');
+  const times = (await heard()).map(({ utcMs }) => utcMs).filter((utcMs) => utcMs <= cutAt);
+  expect(times).toEqual([...new Set(times)].sort((a, b) => a - b));
+  expect(times.filter((utcMs) => utcMs > cutAt - 60_000).length).toBeGreaterThanOrEqual(found);
+  await hand.taps('end-reading');
+  await hand.reads('spot-waiting', /^0 samples, 0 of them on the device/);
+});
+
 chapter('a token that is no token keeps the samples on the page and says so', async () => {
   await hand.types('spot-token', 'no token at all');
   await hand.sees('at least 20 characters and no space');
   expect(await hand.isEnabled('begin-reading')).toBe(false);
   await hand.types('spot-token', 'no-token-of-this-lab-at-all');
   await hand.taps('begin-reading');
-  await hand.reads('spot-trouble', /There is no such device token, or it was revoked.*wait on this page and are sent again/);
+  await hand.reads('spot-trouble', /There is no such device token, or it was revoked.*wait on this device and are sent again/);
   await hand.taps('end-reading');
 });
 
 /** Stored samples as columns of the picture. */
-async function heard(): Promise<{ px: number }[]> {
+async function heard(): Promise<{ utcMs: number; px: number }[]> {
   const { server } = lab();
   const devices = await server.as('viewer', 'GET', `/labs/${demoIds.lab}/rigs/${demoIds.rig}/devices`).expect(200);
   const found = devices.body.channels.find(({ channel }: { channel: { name: string } }) => channel.name === 'light spot');
@@ -112,7 +139,7 @@ async function heard(): Promise<{ px: number }[]> {
     fromUtcMs: nowUtcMs - 600_000,
     toUtcMs: nowUtcMs + 60_000,
   });
-  return [...samples.value].map((mm) => ({ px: (mm - 10) * 4 }));
+  return [...samples.value].map((mm, i) => ({ utcMs: samples.utcMs[i] as number, px: (mm - 10) * 4 }));
 }
 
 const nearest = (px: number) => levelsOf().reduce((best, level) => (Math.abs(level - px) < Math.abs(best - px) ? level : best));

@@ -1,20 +1,37 @@
 import * as fc from 'fast-check';
-import { bufferAfter, emptyBuffer, linesOf, type BufferEvent, type SpotBuffer } from '@/shared/spot/buffer';
+import {
+  bufferAfter,
+  countOfOthers,
+  emptyBuffer,
+  heldPieces,
+  linesOf,
+  type BufferEvent,
+  type SpotBuffer,
+  type SpotPiece,
+} from '@/shared/spot/buffer';
 
 const limits = { most: 500, batch: 150 };
-const after = (events: BufferEvent[], from: SpotBuffer = emptyBuffer) =>
+const channel = 'light spot';
+const empty = emptyBuffer(7000);
+const after = (events: BufferEvent[], from: SpotBuffer = empty) =>
   events.reduce((buffer, event) => bufferAfter(buffer, event, limits), from);
-const measured = (from: number, count: number): BufferEvent[] =>
-  Array.from({ length: count }, (_, i) => ({ type: 'measured', sample: { utcMs: from + i, mm: (from + i) / 10 } }));
-const times = (samples: readonly { utcMs: number }[] | null) => (samples ?? []).map(({ utcMs }) => utcMs);
-const heldBy = ({ underWay, pieces, open }: SpotBuffer) => [...times(underWay), ...pieces.flatMap(times), ...times(open)];
+const sample = (at: number) => ({ utcMs: at, mm: at / 10 });
+const measured = (from: number, count: number, of = channel): BufferEvent[] =>
+  Array.from({ length: count }, (_, i) => ({ type: 'measured', channel: of, sample: sample(from + i) }));
+const send: BufferEvent = { type: 'send', channel };
+const times = (pieces: readonly SpotPiece[] | null) => (pieces ?? []).flatMap(({ samples }) => samples.map(({ utcMs }) => utcMs));
+const heldBy = (buffer: SpotBuffer) => times(heldPieces(buffer));
+const left = (id: number, from: number, count: number, of = channel): SpotPiece => ({
+  ...{ id, channel: of },
+  samples: Array.from({ length: count }, (_, i) => sample(from + i)),
+});
 
 test('a batch is what waited, in order, and the same until it is answered', () => {
-  const sent = after([...measured(0, 7), { type: 'send' }]);
+  const sent = after([...measured(0, 7), send]);
   expect(times(sent.underWay)).toEqual([0, 1, 2, 3, 4, 5, 6]);
-  const later = after([...measured(7, 3), { type: 'send' }, { type: 'send' }], sent);
+  const later = after([...measured(7, 3), send, send], sent);
   expect(later.underWay).toBe(sent.underWay);
-  const stored = after([{ type: 'stored' }, { type: 'send' }], later);
+  const stored = after([{ type: 'stored' }, send], later);
   expect(stored).toMatchObject({ stored: 7, held: 3, dropped: null });
   expect(times(stored.underWay)).toEqual([7, 8, 9]);
 });
@@ -23,8 +40,8 @@ test('after a long silence batches are full ones, none greater than what the ser
   let buffer = after(measured(0, 430));
   const sizes: number[] = [];
   for (let i = 0; i < 9 && buffer.held > 0; i += 1) {
-    buffer = after([{ type: 'send' }], buffer);
-    sizes.push(buffer.underWay?.length ?? 0);
+    buffer = after([send], buffer);
+    sizes.push(times(buffer.underWay).length);
     buffer = after([{ type: 'stored' }], buffer);
   }
   expect(sizes.every((size) => size <= limits.batch)).toBe(true);
@@ -39,21 +56,41 @@ test('beyond the bound the oldest go, and it is told how many and between when',
 });
 
 test('what the server will never take is dropped, and nothing else', () => {
-  const refused = after([...measured(0, 5), { type: 'send' }, ...measured(5, 2), { type: 'refused' }]);
+  const refused = after([...measured(0, 5), send, ...measured(5, 2), { type: 'refused' }]);
   expect(refused).toMatchObject({ held: 2, stored: 0, dropped: { count: 5, fromUtcMs: 0, toUtcMs: 4 } });
 });
 
-test('whatever happens, every sample is held, stored or told as dropped, in order and within the bound', () => {
+test('what a page before left is sent before what was measured since, within the same bound', () => {
+  const begun = after([...measured(900, 20), { type: 'found', pieces: [left(1, 100, 90), left(2, 190, 100)] }, send]);
+  expect(begun.held).toBe(210);
+  expect(times(begun.underWay)).toEqual(Array.from({ length: 90 }, (_, i) => 100 + i));
+  expect(heldBy(begun)).toEqual([...Array.from({ length: 190 }, (_, i) => 100 + i), ...Array.from({ length: 20 }, (_, i) => 900 + i)]);
+  const tooMuch = after([{ type: 'found', pieces: Array.from({ length: 7 }, (_, i) => left(i, 100 * i, 100)) }]);
+  expect(tooMuch).toMatchObject({ held: 500, dropped: { count: 200, fromUtcMs: 0, toUtcMs: 199 } });
+});
+
+test('samples go to the channel they were measured for; those of another one wait', () => {
+  const changed = after([...measured(0, 4), ...measured(4, 3, 'left edge'), { type: 'send', channel: 'left edge' }]);
+  expect(times(changed.underWay)).toEqual([4, 5, 6]);
+  expect(countOfOthers(changed, 'left edge')).toBe(4);
+  // The batch without an answer waits while another channel is chosen, and is the first of its own again.
+  const back = after([send], changed);
+  expect(times(back.underWay)).toEqual([0, 1, 2, 3]);
+  expect(times(after([{ type: 'stored' }, { type: 'send', channel: 'left edge' }], back).underWay)).toEqual([4, 5, 6]);
+});
+
+test('whatever happens, every sample is held, stored or told as dropped, in order and within the bound, in pieces whose ids grow', () => {
   const happening = fc.oneof(
     fc.integer({ min: 1, max: 120 }).map((count) => ({ kind: 'measured' as const, count })),
     fc.constantFrom({ kind: 'send' as const }, { kind: 'stored' as const }, { kind: 'refused' as const }),
   );
   fc.assert(
     fc.property(fc.array(happening, { maxLength: 40 }), (story) => {
-      let buffer = emptyBuffer;
+      let buffer = empty;
       let count = 0;
       for (const event of story) {
-        const events = event.kind === 'measured' ? measured(count, event.count) : [{ type: event.kind }];
+        const events: BufferEvent[] =
+          event.kind === 'measured' ? measured(count, event.count) : event.kind === 'send' ? [send] : [{ type: event.kind }];
         count += event.kind === 'measured' ? event.count : 0;
         buffer = after(events, buffer);
         const held = heldBy(buffer);
@@ -61,6 +98,9 @@ test('whatever happens, every sample is held, stored or told as dropped, in orde
         expect(buffer.held).toBeLessThanOrEqual(limits.most);
         expect(buffer.held + buffer.stored + (buffer.dropped?.count ?? 0)).toBe(count);
         expect(held).toEqual([...held].sort((a, b) => a - b));
+        const ids = heldPieces(buffer).map(({ id }) => id);
+        expect(ids).toEqual([...new Set(ids)].sort((a, b) => a - b));
+        expect(ids.every((id) => id >= 7000 && id < buffer.nextId)).toBe(true);
       }
     }),
     { numRuns: 50 },
@@ -68,7 +108,7 @@ test('whatever happens, every sample is held, stored or told as dropped, in orde
 });
 
 test('lines are what the way in of devices reads, stamped to the microsecond', () => {
-  expect(linesOf('light spot', [{ utcMs: Date.UTC(2031, 1, 14, 20) + 100.25, mm: 12.5 }])).toBe(
+  expect(linesOf([{ id: 1, channel, samples: [{ utcMs: Date.UTC(2031, 1, 14, 20) + 100.25, mm: 12.5 }] }])).toBe(
     '{"channel":"light spot","time_utc":"2031-02-14T20:00:00.100250Z","value":12.5}',
   );
 });
