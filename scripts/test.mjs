@@ -19,7 +19,17 @@ const output = join(root, 'test-output');
 mkdirSync(output, { recursive: true });
 /** Debian's packages and the cluster need nothing of npm's. */
 async function machine() {
-  await ensureDebianPackages(['postgresql', 'chromium-headless-shell', 'socat', 'ser2net', 'g++', 'gcc-avr', 'avr-libc']);
+  await ensureDebianPackages([
+    'postgresql',
+    'chromium-headless-shell',
+    'socat',
+    'ser2net',
+    'mosquitto',
+    'openssl',
+    'g++',
+    'gcc-avr',
+    'avr-libc',
+  ]);
   return startCluster('test');
 }
 const [cluster] = await Promise.all([machine(), ensureNodeModules()]);

@@ -1,113 +1,155 @@
 import { useState } from 'react';
+import { View } from 'react-native';
 import { fieldErrors, useLabMutation, wordsOf } from '@/components/api';
 import { Button, Field, Label, ProblemNotice, Sheet, Tabs } from '@/components/ui';
-import { readDecimal } from '@/components/ui/read-decimal';
-import { addBroker } from '@/shared/contracts/brokers';
-import type { RigView } from '@/shared/contracts/rigs';
+import { addBroker, reviseBroker, type BrokerView } from '@/shared/contracts/brokers';
+import { draftOf, freshBroker, freshTopic, isWhole, settingOf, signInOf, type BrokerDraft } from './broker-draft';
+import { TopicForm } from './topic-form';
 
-const atOnce = {
-  address: 'mqtt://',
-  userName: '',
-  password: '',
-  filter: '',
-  channel: 'box temperature',
-  unit: 'degC',
-  valuePath: '',
-  timePath: '',
-};
-type TimeForm = 'arrival' | 'iso' | 's' | 'ms';
+const mostTopics = 8;
 
-/** Adds a broker with one of its topics. */
-export function BrokerSheet({ rig, onClose }: { rig: RigView; onClose: () => void }) {
-  const [draft, setDraft] = useState(atOnce);
-  const [role, setRole] = useState<'deflection' | 'environment'>('environment');
-  const [form, setForm] = useState<TimeForm>('arrival');
-  const [rate, setRate] = useState('0.1');
-  const [stampU, setStampU] = useState('1');
+interface BrokerSheetProps {
+  rigId: string;
+  /** The one to be changed; null: another one is added. */
+  broker: BrokerView | null;
+  onClose: () => void;
+}
+
+/** Adds a broker, or changes how one is listened to. */
+export function BrokerSheet({ rigId, broker, onClose }: BrokerSheetProps) {
+  const [draft, setDraft] = useState(broker === null ? freshBroker : draftOf(broker));
   const add = useLabMutation(addBroker, onClose);
-  const errors = fieldErrors(add.error);
-  const [rateHz, timeUS] = [readDecimal(rate), readDecimal(stampU)];
-  const complete = draft.filter.trim() !== '' && draft.channel.trim() !== '' && draft.unit.trim() !== '';
-  const whole = complete && (form === 'arrival' || draft.timePath.trim() !== '') && (rateHz ?? 0) > 0 && (timeUS ?? 0) > 0;
-  const set = (key: keyof typeof atOnce) => (text: string) => setDraft({ ...draft, [key]: text });
-  const orNull = (text: string) => (text.trim() === '' ? null : text.trim());
-  const send = () =>
-    add.mutate({
-      params: { rigId: rig.id },
-      body: {
-        address: draft.address.trim(),
-        userName: orNull(draft.userName),
-        password: draft.password === '' ? null : draft.password,
-        topics: [
-          {
-            filter: draft.filter.trim(),
-            channel: { name: draft.channel.trim(), role, unit: draft.unit.trim(), rateHz: rateHz ?? 0 },
-            valuePath: orNull(draft.valuePath),
-            time: form === 'arrival' ? null : { path: draft.timePath.trim(), form },
-            timeUS: timeUS ?? 0,
-          },
-        ],
-      },
-    });
-  const text = (key: keyof typeof atOnce, label: string, more: { hint?: string; error?: string | undefined } = {}) => (
-    <Field label={label} value={draft[key]} onChange={set(key)} testID={`broker-${key}`} {...more} />
-  );
+  const revise = useLabMutation(reviseBroker, onClose);
+  const act = broker === null ? add : revise;
+  const errors = fieldErrors(act.error);
+  const change = (part: Partial<BrokerDraft>) => {
+    setDraft({ ...draft, ...part });
+    // What was said of the draft before says nothing of this one.
+    if (act.isError) act.reset();
+  };
+  const send = () => {
+    const setting = settingOf(draft);
+    if (broker === null) return add.mutate({ params: { rigId }, body: { ...setting, ...signInOf(draft) } });
+    const signIn = draft.signsInAsBefore ? ('as-before' as const) : signInOf(draft);
+    return revise.mutate({ params: { rigId, brokerId: broker.id }, body: { ...setting, signIn } });
+  };
+  const { topics } = draft;
   return (
     <Sheet
       open
-      title="Listen to a broker"
+      title={broker === null ? 'Listen to a broker' : 'Change how a broker is listened to'}
       onClose={onClose}
       testID="broker-sheet"
       footer={
-        <Button kind="primary" size="action" label="Listen" disabled={!whole} busy={add.isPending} onPress={send} testID="make-broker" />
+        <Button
+          kind="primary"
+          size="action"
+          label={broker === null ? 'Listen' : 'Listen in this way'}
+          disabled={!isWhole(draft)}
+          busy={act.isPending}
+          onPress={send}
+          testID="make-broker"
+        />
       }
     >
-      {text('address', 'Address', { hint: 'mqtt://host:1883, or mqtts://host:8883 with TLS.', error: errors['address'] })}
-      {text('userName', 'Name at the broker', { hint: 'Empty where it asks for none.', error: errors['userName'] })}
-      <Field label="Password" type="password" value={draft.password} onChange={set('password')} testID="broker-password" />
-      <Label>The password goes to the broker and is never shown again. Without TLS it crosses the network readable.</Label>
-      {text('filter', 'Topic', { hint: '+ stands for one level, # for all that follow.', error: errors['topics.0.filter'] })}
-      <Tabs
-        label="What it measures"
-        value={role}
-        options={[
-          { value: 'environment', label: 'The room' },
-          { value: 'deflection', label: 'Deflection' },
-        ]}
-        onChange={setRole}
-      />
-      {text('channel', 'Channel', { error: errors['topics.0.channel.name'] })}
-      {text('unit', 'Unit', { error: errors['topics.0.channel.unit'] })}
-      <Field label="Samples a second to expect" value={rate} onChange={setRate} type="number" unit="Hz" />
-      {text('valuePath', 'Where the number is', {
-        hint: 'In a JSON message, such as sensor.value or values[0]. Empty: the message is the number.',
-        error: errors['topics.0.valuePath'],
-      })}
-      <Tabs
-        label="Time of the measurement"
-        value={form}
-        options={[
-          { value: 'arrival', label: 'On arrival' },
-          { value: 'iso', label: 'ISO, UTC' },
-          { value: 's', label: 'Epoch s' },
-          { value: 'ms', label: 'Epoch ms' },
-        ]}
-        onChange={setForm}
-      />
-      {form === 'arrival' ? (
-        <Label>What the broker kept from before is refused then: nobody knows when it was measured.</Label>
-      ) : (
-        text('timePath', 'Where the time is', { error: errors['topics.0.time.path'] })
+      <Connection draft={draft} change={change} errors={errors} hadSignIn={broker?.signsIn ?? false} />
+      {topics.map((topic, index) => (
+        <TopicForm
+          key={index}
+          topic={topic}
+          index={index}
+          only={topics.length === 1}
+          onChange={(next) => change({ topics: topics.map((each, i) => (i === index ? next : each)) })}
+          onRemove={() => change({ topics: topics.filter((_, i) => i !== index) })}
+          errors={errors}
+        />
+      ))}
+      {topics.length >= mostTopics ? null : (
+        <Button
+          icon="plus"
+          label="Another topic"
+          className="self-start"
+          onPress={() => change({ topics: [...topics, { ...freshTopic, channel: '' }] })}
+          testID="add-topic"
+        />
       )}
-      <Field
-        label="Standard uncertainty of the time"
-        value={stampU}
-        onChange={setStampU}
-        type="number"
-        unit="s"
-        error={errors['topics.0.timeUS']}
-      />
-      {add.isError ? <ProblemNotice title="The broker was not added" {...wordsOf(add.error)} /> : null}
+      {broker === null ? null : <Label>What came so far stays as it is.</Label>}
+      {act.isError ? (
+        <ProblemNotice title={broker === null ? 'The broker was not added' : 'Nothing was changed'} {...wordsOf(act.error)} />
+      ) : null}
     </Sheet>
+  );
+}
+
+interface ConnectionProps {
+  draft: BrokerDraft;
+  change: (part: Partial<BrokerDraft>) => void;
+  errors: Readonly<Record<string, string>>;
+  hadSignIn: boolean;
+}
+
+/** Where it is, what proves that it is the one, and how the server signs in there. */
+function Connection({ draft, change, errors, hadSignIn }: ConnectionProps) {
+  return (
+    <View className="gap-4">
+      <Field
+        label="Address"
+        value={draft.address}
+        onChange={(address) => change({ address })}
+        hint="mqtt://host:1883, or mqtts://host:8883 with TLS."
+        error={errors['address']}
+        testID="broker-address"
+      />
+      {draft.address.trim().startsWith('mqtts:') || draft.ca !== '' ? (
+        <Field
+          label="Certificate of the authority that signed the broker's"
+          value={draft.ca}
+          onChange={(ca) => change({ ca })}
+          lines={4}
+          mono
+          hint="PEM, from -----BEGIN CERTIFICATE----- on. Empty: the authorities that the server's system trusts."
+          error={errors['ca']}
+          testID="broker-ca"
+        />
+      ) : null}
+      {hadSignIn ? (
+        <Tabs
+          label="Name and password"
+          value={draft.signsInAsBefore ? 'before' : 'anew'}
+          options={[
+            { value: 'before', label: 'As before' },
+            { value: 'anew', label: 'Given anew' },
+          ]}
+          onChange={(way) => change({ signsInAsBefore: way === 'before' })}
+          testID="broker-sign-in"
+        />
+      ) : null}
+      {errors['signIn'] === undefined ? null : (
+        <Label role="alert" tone="danger">
+          {errors['signIn']}
+        </Label>
+      )}
+      {draft.signsInAsBefore ? null : (
+        <>
+          <Field
+            label="Name at the broker"
+            value={draft.userName}
+            onChange={(userName) => change({ userName })}
+            hint="Empty where it asks for none."
+            error={errors['userName'] ?? errors['signIn.userName']}
+            testID="broker-userName"
+          />
+          <Field
+            label="Password"
+            type="password"
+            autoComplete="off"
+            value={draft.password}
+            onChange={(password) => change({ password })}
+            testID="broker-password"
+          />
+          <Label>The password goes to the broker and is never shown again. Without TLS it crosses the network readable.</Label>
+        </>
+      )}
+    </View>
   );
 }

@@ -17,7 +17,8 @@ export function BrokersPanel({ rig }: { rig: RigView }) {
   const mayManage = useMay('tokens.manage').ok;
   const brokers = useLabQuery(listBrokers, { params: { rigId: rig.id }, everyMs: 5_000 });
   const refresh = () => void queries.invalidateQueries({ queryKey: labKey(labId, listBrokers) });
-  const [adding, setAdding] = useState(false);
+  /** The broker that is changed, or that another one is added. */
+  const [asked, setAsked] = useState<BrokerView | 'another' | null>(null);
   const items = brokers.data?.data.items ?? [];
   if (items.length === 0 && !mayManage && !brokers.isError) return null;
   return (
@@ -25,20 +26,28 @@ export function BrokersPanel({ rig }: { rig: RigView }) {
       <Label>Sensors that speak MQTT send to a broker; the messages of its topics fill channels of this rig.</Label>
       {brokers.isError ? <ProblemNotice title="The brokers could not be read" {...wordsOf(brokers.error)} /> : null}
       {items.map((broker) => (
-        <BrokerRow key={broker.id} rigId={rig.id} broker={broker} mayManage={mayManage} onDone={refresh} />
+        <BrokerRow
+          key={broker.id}
+          rigId={rig.id}
+          broker={broker}
+          mayManage={mayManage}
+          onDone={refresh}
+          onChange={() => setAsked(broker)}
+        />
       ))}
       {mayManage ? (
-        <Button icon="plus" label="Listen to a broker" className="self-start" onPress={() => setAdding(true)} testID="add-broker" />
+        <Button icon="plus" label="Listen to a broker" className="self-start" onPress={() => setAsked('another')} testID="add-broker" />
       ) : null}
-      {adding ? (
+      {asked === null ? null : (
         <BrokerSheet
-          rig={rig}
+          rigId={rig.id}
+          broker={asked === 'another' ? null : asked}
           onClose={() => {
             refresh();
-            setAdding(false);
+            setAsked(null);
           }}
         />
-      ) : null}
+      )}
     </Panel>
   );
 }
@@ -50,8 +59,8 @@ function stateWords(status: BrokerStatus | null): string {
   return `not connected, lost ${ago(status.since)}: ${status.reason ?? 'the reason is not known'}. It is tried again.`;
 }
 
-function BrokerRow(props: { rigId: string; broker: BrokerView; mayManage: boolean; onDone: () => void }) {
-  const { rigId, broker, mayManage, onDone } = props;
+function BrokerRow(props: { rigId: string; broker: BrokerView; mayManage: boolean; onDone: () => void; onChange: () => void }) {
+  const { rigId, broker, mayManage, onDone, onChange } = props;
   const [sure, setSure] = useState(false);
   const remove = useLabMutation(removeBroker, onDone);
   return (
@@ -66,13 +75,22 @@ function BrokerRow(props: { rigId: string; broker: BrokerView; mayManage: boolea
           </Label>
         </View>
         {mayManage && !sure ? (
-          <Button
-            kind="quiet"
-            label="Remove"
-            accessibilityLabel={`Listen no more to ${broker.address}`}
-            onPress={() => setSure(true)}
-            testID="remove-broker"
-          />
+          <View className="flex-row flex-wrap">
+            <Button
+              kind="quiet"
+              label="Change"
+              accessibilityLabel={`Change how ${broker.address} is listened to`}
+              onPress={onChange}
+              testID="change-broker"
+            />
+            <Button
+              kind="quiet"
+              label="Remove"
+              accessibilityLabel={`Listen no more to ${broker.address}`}
+              onPress={() => setSure(true)}
+              testID="remove-broker"
+            />
+          </View>
         ) : null}
       </View>
       {broker.topics.map((topic, index) => (

@@ -93,9 +93,11 @@ export const brokers = pgTable(
       .default(sql`gen_random_uuid()`),
     rigId: key('rig_id').notNull(),
     address: text('address').notNull(),
-    /** Never told to anybody but the broker; gone with its removal. */
+    /** Never told to anybody but the broker; gone with its removal. The password is sealed. */
     userName: text('user_name'),
     password: text('password'),
+    /** Certificate that proves the broker's own, PEM; null: those that the system trusts. */
+    ca: text('ca'),
     topics: json('topics').$type<BrokerTopic[]>().notNull(),
     madeAt: instant('made_at').notNull(),
     madeBy: text('made_by').notNull(),

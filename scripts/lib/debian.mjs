@@ -46,6 +46,8 @@ const present = {
   'gcc-avr': () => onPath('avr-g++'),
   'avr-libc': () => existsSync('/usr/lib/avr/include/avr/io.h'),
   ser2net: () => onPath('ser2net'),
+  mosquitto: () => onPath('mosquitto'),
+  openssl: () => onPath('openssl'),
 };
 
 /** Makes sure that Debian's packages are there: installs them when root, else says the exact command and ends. */

@@ -43,6 +43,7 @@ import { knownHeads } from './audit-anchor';
 import { freeBytesAt, freeDisks } from './free-disk';
 import { JobCrew } from './job-crew';
 import { foldersOf, objectsOf } from './objects-of';
+import { createSecretBox } from './secret-box';
 import { RigTaking } from './take-rigs';
 import { createWorkerTasks } from './worker-tasks';
 
@@ -98,7 +99,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     ...{ newId: randomUUID, sha256: sha256Hex, desk, outlook, post, arrived: told.arrived, runChanged: told.runChanged },
     ...{ reviews: new Reviews({ clock, newToken }), startSeeds: new StartSeeds({ clock, newId: randomUUID }), answers: new AnswerCounts() },
     ...{ objects: overrides.objects ?? objectsOf(config), appendRates: new AppendRates(clock, () => services.config.devices) },
-    idempotency: createIdempotency(database.db, nowUtcMs),
+    ...{ idempotency: createIdempotency(database.db, nowUtcMs), secrets: createSecretBox(config) },
     ...buildTelling(parts, () => services.config.port),
     activeRuns: new ActiveRuns({ supervisor, onChange: told.runChanged }),
     watchedLabs: () => [...new Set([...services.activeRuns.labIds(), ...guided.labIds()])],

@@ -16,6 +16,7 @@ import type { OutgoingPort } from '../interfaces/outgoing';
 import type { LiveChange, ProcessPost } from '../interfaces/process-post';
 import type { PushPort } from '../interfaces/push';
 import type { TellParts } from '../notify/tell';
+import type { SecretBox } from '../interfaces/secret-box';
 import type { RigStations } from '../interfaces/rig-stations';
 import type { AppendRates } from '../ingest/append-rate';
 import type { ChannelFacts } from '../ingest/recent-samples';
@@ -50,6 +51,8 @@ export interface Services {
   sessions: SessionPort;
   access: AccessDirectory;
   idempotency: IdempotencyPort;
+  /** For passwords that the server gives to others. */
+  secrets: SecretBox;
   mail: MailPort;
   push: PushPort;
   outgoing: OutgoingPort;

@@ -11,8 +11,12 @@ const LONGEST_WAIT_MS = 60_000;
 const MOST_WAITING = 20_000;
 const SHOWN_PAYLOAD = 120;
 
+const unreadable = 'its password was kept by a server with another key: give it again, or give all servers the same EVENFALL_SECRET_KEY';
+
 interface FeedParts {
   broker: BrokerRecord;
+  /** Null where it asks for none; undefined where this server cannot read it. */
+  password: string | null | undefined;
   clock: Clock;
   open: OpenBrokerLine;
   samplesPerMinute: () => number;
@@ -70,12 +74,17 @@ export class BrokerFeed {
 
   private connect(): void {
     if (this.closed) return;
-    const { id, address, userName, password, topics } = this.parts.broker;
+    const { broker, password } = this.parts;
+    const { id, address, userName, ca, topics } = broker;
+    if (password === undefined) {
+      this.state = { state: 'away', since: this.state.since, reason: unreadable };
+      return;
+    }
     // 23 letters and digits at most: every broker takes them (MQTT 3.1.1, 3.1.3.1).
     const clientId = `evenfall${id.replaceAll('-', '').slice(0, 15)}`;
     const filters = [...new Set(topics.map(({ filter }) => filter))];
     this.line = this.parts.open(
-      { address, clientId, userName, password, filters },
+      { address, clientId, userName, password, ca, filters },
       {
         connected: () => {
           this.attempts = 0;

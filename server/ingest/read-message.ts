@@ -39,12 +39,14 @@ const rightForm = {
   iso: 'UTC as 2031-02-14T20:00:00.125Z',
   s: 'a number of seconds since 1970',
   ms: 'a number of milliseconds since 1970',
+  us: 'a number of microseconds since 1970',
 };
 
-function instantOf(stamp: unknown, form: 'iso' | 's' | 'ms'): number {
+function instantOf(stamp: unknown, form: NonNullable<BrokerTopic['time']>['form']): number {
   if (form === 'iso') return typeof stamp === 'string' ? parseInstant(stamp) : Number.NaN;
   if (typeof stamp !== 'number' || !Number.isFinite(stamp)) return Number.NaN;
-  return form === 's' ? stamp * 1000 : stamp;
+  // 1.8e15 µs is below 2⁵³: no microsecond is lost on the way.
+  return form === 's' ? stamp * 1000 : form === 'us' ? stamp / 1000 : stamp;
 }
 
 /** `sensor.values[0].v` of a JSON value; undefined where there is nothing. */

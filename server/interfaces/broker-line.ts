@@ -6,6 +6,8 @@ export interface BrokerSetting {
   clientId: string;
   userName: string | null;
   password: string | null;
+  /** PEM; null: what the system trusts. */
+  ca: string | null;
   filters: readonly string[];
 }
 

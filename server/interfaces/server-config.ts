@@ -36,6 +36,8 @@ export interface ServerConfig {
   watchdogS: number;
   /** Folder for what is not in the database: mails of the demo, journals. */
   stateDir: string;
+  /** What passwords in the database are sealed with; null: with a key that lies in the state folder. */
+  secretKey: string | null;
   /** Folder of the files that people brought in; not used where they are in S3. */
   filesDir: string;
   s3: S3Place | null;

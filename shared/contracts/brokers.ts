@@ -27,7 +27,7 @@ export const brokerTopicSchema = z.strictObject({
   /** Where the number is in a JSON message; null: the message is the number. */
   valuePath: pathSchema.nullable(),
   /** When it was measured; null: it is stamped as it arrives. */
-  time: z.strictObject({ path: pathSchema, form: z.enum(['iso', 's', 'ms']) }).nullable(),
+  time: z.strictObject({ path: pathSchema, form: z.enum(['iso', 's', 'ms', 'us']) }).nullable(),
   /** Standard uncertainty of the stamp, s. */
   timeUS: z.number().positive().max(3600),
 });
@@ -56,6 +56,8 @@ export const brokerViewSchema = z.strictObject({
   address: z.string(),
   /** Whether it is given a name and a password; neither is ever told. */
   signsIn: z.boolean(),
+  /** Certificate by which its own is proved, PEM; null: those that the system trusts. */
+  ca: z.string().nullable(),
   topics: z.array(brokerTopicSchema),
   madeAt: instantSchema,
   madeBy: z.string(),
@@ -65,6 +67,20 @@ export const brokerViewSchema = z.strictObject({
 export type BrokerView = z.infer<typeof brokerViewSchema>;
 
 const path = '/labs/:labId/rigs/:rigId/brokers';
+
+const settingShape = {
+  address: z
+    .string()
+    .trim()
+    .max(300)
+    .regex(/^mqtts?:\/\/([\w.-]+|\[[0-9a-fA-F:.]+\])(:\d{1,5})?\/?$/, 'mqtt://host:1883, or mqtts://host:8883 with TLS'),
+  ca: z.string().trim().min(1).max(20_000).nullish(),
+  topics: z.array(brokerTopicSchema).min(1).max(8),
+};
+const signInShape = {
+  userName: z.string().trim().min(1).max(200).nullable(),
+  password: z.string().min(1).max(1000).nullable(),
+};
 
 export const listBrokers = defineRoute({
   name: 'listBrokers',
@@ -83,16 +99,19 @@ export const addBroker = defineRoute({
   path,
   access: 'tokens.manage',
   status: 201,
-  body: z.strictObject({
-    address: z
-      .string()
-      .trim()
-      .max(300)
-      .regex(/^mqtts?:\/\/([\w.-]+|\[[0-9a-fA-F:.]+\])(:\d{1,5})?\/?$/, 'mqtt://host:1883, or mqtts://host:8883 with TLS'),
-    userName: z.string().trim().min(1).max(200).nullable(),
-    password: z.string().min(1).max(1000).nullable(),
-    topics: z.array(brokerTopicSchema).min(1).max(8),
-  }),
+  body: z.strictObject({ ...settingShape, ...signInShape }),
+  response: brokerViewSchema,
+  problems: ['invalid-input', 'not-found', 'already-exists'],
+});
+export const reviseBroker = defineRoute({
+  name: 'reviseBroker',
+  summary: 'Listen to a broker in another way: what it sent so far stays as it is',
+  method: 'PUT',
+  path: `${path}/:brokerId`,
+  access: 'tokens.manage',
+  status: 200,
+  /** Name and password are given anew where the address is another one. */
+  body: z.strictObject({ ...settingShape, signIn: z.union([z.literal('as-before'), z.strictObject(signInShape)]) }),
   response: brokerViewSchema,
   problems: ['invalid-input', 'not-found', 'already-exists'],
 });

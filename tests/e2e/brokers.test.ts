@@ -30,6 +30,10 @@ chapter('an owner adds a broker with a topic', async () => {
   await hand.types('broker-channel', 'cellar air');
   await hand.taps('make-broker');
   await hand.sees(/# alone as the last level/);
+  await hand.sees('The broker was not added');
+  // What was said of the topic goes with it.
+  await hand.types('broker-filter', 'lab/+/ai');
+  await hand.page.getByText('The broker was not added').waitFor({ state: 'detached' });
   await hand.types('broker-filter', 'lab/+/air');
   await hand.shoots('broker-sheet');
   await hand.taps('make-broker');
@@ -60,6 +64,23 @@ chapter('what comes and what is refused is seen', async () => {
   await desk.at('broker-sheet').waitFor();
   await desk.shoots('broker-sheet');
   await lab().close(desk.browser);
+});
+
+chapter('the mapping is changed, and another topic comes to it', async () => {
+  await hand.taps('change-broker');
+  expect(await hand.at('broker-filter').inputValue()).toBe('lab/+/air');
+  await hand.types('broker-filter', 'lab/attic/air');
+  await hand.taps('add-topic');
+  const second = hand.page.getByTestId('broker-topic-form').nth(1);
+  expect(await hand.isEnabled('make-broker')).toBe(false);
+  await second.getByTestId('broker-filter').fill('lab/attic/tilt');
+  await second.getByTestId('broker-channel').fill('attic tilt');
+  await second.getByTestId('broker-unit').fill('urad');
+  await hand.shoots('broker-change');
+  await hand.taps('make-broker');
+  await hand.at('broker-sheet').waitFor({ state: 'detached' });
+  await hand.sees(/lab\/attic\/air fills cellar air, degC/);
+  await hand.sees(/lab\/attic\/tilt fills attic tilt, urad/);
 });
 
 chapter('a removed broker is gone', async () => {

@@ -6,6 +6,7 @@ import { ConflictingBatchError, storeBatches } from '@/server/store/device-token
 import { isPassing } from '@/server/store/failures';
 import { channelsOfRig, type ChannelRecord } from '@/server/store/imports';
 import { ThinnedSamplesError } from '@/server/store/thinned-error';
+import { readPassword } from '../broker-password';
 import type { Services } from '../services';
 
 /** Where no broker is listened to: whether there is one now, ms. */
@@ -15,8 +16,12 @@ const TELL_MS = 15_000;
 /** Samples of one channel that are refused one by one before the rest of the batch is. */
 const MOST_REFUSED = 20;
 
+/** What is listened to and how: another one is another line. */
+const wayOf = ({ address, userName, password, ca, topics }: BrokerRecord) => JSON.stringify([address, userName, password, ca, topics]);
+
 interface Held {
   broker: BrokerRecord;
+  way: string;
   feed: BrokerFeed;
   told: string;
   toldAtMs: number;
@@ -63,18 +68,23 @@ export class BrokerWatch {
     const { clock, config } = services;
     await this.storeAll();
     const wanted = (await allBrokers(services.database.db)).filter(({ rigId }) => holds(rigId));
-    const ids = new Set(wanted.map(({ id }) => id));
-    for (const [id, { feed }] of this.held) {
-      if (ids.has(id)) continue;
-      feed.close();
-      this.held.delete(id);
-    }
+    await this.leave(wanted);
     for (const broker of this.stopped ? [] : wanted) {
       if (this.held.has(broker.id)) continue;
-      const feed = new BrokerFeed({ broker, clock, open, samplesPerMinute: () => config.devices.samplesPerMinute });
-      this.held.set(broker.id, { broker, feed, told: '', toldAtMs: 0 });
+      const password = await readPassword(services, broker);
+      const feed = new BrokerFeed({ broker, password, clock, open, samplesPerMinute: () => config.devices.samplesPerMinute });
+      this.held.set(broker.id, { broker, way: wayOf(broker), feed, told: '', toldAtMs: 0 });
     }
     for (const held of this.held.values()) await this.tell(held);
+  }
+
+  /** Closes the lines that are not wanted, or not in this way; what they brought last is stored. */
+  private async leave(wanted: readonly BrokerRecord[]): Promise<void> {
+    const left = [...this.held].filter(([id, { way }]) => !wanted.some((broker) => broker.id === id && wayOf(broker) === way));
+    if (left.length === 0) return;
+    for (const [, { feed }] of left) feed.close();
+    await this.storeAll();
+    for (const [id] of left) this.held.delete(id);
   }
 
   private async storeAll(): Promise<void> {

@@ -205,6 +205,11 @@ export const rows: Readonly<Record<string, Row>> = {
     body: () => ({ address: 'mqtt://127.0.0.1:9', userName: null, password: null, topics: [topic(randomUUID())] }),
     allowed: 201,
   },
+  reviseBroker: {
+    params: (things) => ({ ...rig(things), brokerId: nobody }),
+    body: () => ({ address: 'mqtt://127.0.0.1:9', topics: [topic(randomUUID())], signIn: 'as-before' }),
+    allowed: 404,
+  },
   removeBroker: { params: (things) => ({ ...rig(things), brokerId: nobody }), allowed: 404 },
   listCameras: { params: rig, allowed: 200 },
   addCamera: {

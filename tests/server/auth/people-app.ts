@@ -108,6 +108,7 @@ const testConfig = (stateDir: string, changes: Partial<ServerConfig>): ServerCon
   demo: false,
   virtualExitDelayS: 120,
   watchdogS: 3,
+  secretKey: null,
   stateDir,
   webDir: null,
   ...{ filesDir: stateDir, s3: null },

@@ -36,7 +36,15 @@ test('healthz says that the process lives, readyz that it can serve and drives i
 test('figures for Prometheus, on loopback alone and not beside the application', async () => {
   await lab.as('viewer', 'GET', '/health').expect(200);
   const { db } = lab.services.database;
-  const place = { labId: demoIds.lab, rigId: demoIds.rig, address: 'mqtt://sensors.lan', userName: null, password: null, topics: [] };
+  const place = {
+    labId: demoIds.lab,
+    rigId: demoIds.rig,
+    address: 'mqtt://sensors.lan',
+    userName: null,
+    password: null,
+    ca: null,
+    topics: [],
+  };
   const broker = await insertBroker(db, { ...place, madeAt: lab.clock.utcMs(), madeBy: 'Ott' });
   const heard = { taken: 7, refused: 2, last: null, lastRefused: null };
   await tellBrokerStatus(db, broker, { state: 'away', since: lab.nowIso(), reason: null, toldAt: lab.nowIso(), topics: [heard, heard] });

@@ -92,7 +92,7 @@ test('a broker is told of once it has been away for a minute, by what the server
   const { db } = database().connection;
   const air = { name: 'box air', role: 'environment', unit: 'degC', rateHz: 0.1 } as const;
   const topics = [{ filter: 'air', channel: air, valuePath: null, time: null, timeUS: 1 }];
-  const place = { labId: demoIds.lab, rigId: demoIds.rig, address: 'mqtt://sensors.lan:1883', userName: null, password: null };
+  const place = { labId: demoIds.lab, rigId: demoIds.rig, address: 'mqtt://sensors.lan:1883', userName: null, password: null, ca: null };
   const broker = await insertBroker(db, { ...place, topics, madeAt: clock.utcMs(), madeBy: 'Ott' });
   const since = new Date(clock.utcMs()).toISOString();
   const says = (state: 'away' | 'connected') => {

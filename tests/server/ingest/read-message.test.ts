@@ -19,6 +19,15 @@ test('a number in JSON, with its own time in each form', () => {
   expect(read(text, { ...value, time: { path: 's', form: 's' } })).toEqual({ utcMs: 1928865599250, value: 4.5 });
 });
 
+test('a stamp in microseconds loses none of them', () => {
+  const timed = { valuePath: 'v', time: { path: 't', form: 'us' as const } };
+  for (const us of [1_928_865_599_000_001, 1_928_865_599_750_123, 1_928_865_599_999_999]) {
+    const found = read(`{"v": 1, "t": ${String(us)}}`, timed);
+    expect(typeof found === 'string' ? found : Math.round(found.utcMs * 1000)).toBe(us);
+  }
+  expect(read('{"v": 1, "t": "now"}', timed)).toMatch(/a number of microseconds since 1970 is needed/);
+});
+
 test('a kept message counts only with its own time', () => {
   expect(read('3', {}, true)).toMatch(/kept by the broker from before/);
   const timed = { valuePath: 'v', time: { path: 't', form: 'iso' as const } };
