@@ -42,7 +42,7 @@ export function buildServer(parts: BuildParts): BuiltServer {
   const app = createApp(services, allRoutes);
   const server = createServer(app);
   const life = new Life(services, inside, parts);
-  const metrics = new MetricsPort(services);
+  const metrics = new MetricsPort(services, inside.databaseDisk);
   const listenToWatchers = async () => {
     services.config.metricsPort = await metrics.listen(services.config.metricsPort);
   };

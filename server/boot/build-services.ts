@@ -40,7 +40,8 @@ import type { BuildParts } from './build-parts';
 import { buildRigSide, type RigSide } from './build-rigs';
 import { createLog } from './create-log';
 import { knownHeads } from './audit-anchor';
-import { freeBytesAt, freeDisks } from './free-disk';
+import { DatabaseDisk } from './database-disk';
+import { freeBytesAt, fullest } from './free-disk';
 import { JobCrew } from './job-crew';
 import { foldersOf, objectsOf } from './objects-of';
 import { createSecretBox } from './secret-box';
@@ -58,6 +59,7 @@ export interface Inside extends Omit<RigSide, 'supervisor' | 'guided' | 'soak' |
   tellTakenUp(): void;
   closeTasks(): Promise<void>;
   across: Pick<Across, 'close'>;
+  databaseDisk: DatabaseDisk;
 }
 
 const noMail: MailPort = { send: () => Promise.reject(new MailNotSetUp()) };
@@ -111,14 +113,14 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     breathe: () => new Promise((resolve) => setImmediate(resolve)),
     pokeJobs: () => (crew.poke(), told.jobsQueued()),
   };
-  const watch = new AlarmWatch({ services, paceMs: overrides.paceMs, freeDisk: () => freeDisks(foldersOf(config)) });
-  const crew = buildCrew(parts, services);
+  const [databaseDisk, crew] = [new DatabaseDisk(config, { database, log }), buildCrew(parts, services)];
+  const watch = new AlarmWatch({ services, paceMs: overrides.paceMs, freeDisk: () => fullest(foldersOf(config), databaseDisk) });
   const taking = new RigTaking(services, { leases, arms, locks, stations, recent });
   tellOn(services, stations, told);
   return {
     services,
     inside: {
-      ...{ leases, arms, arming, locks, stations, apparatus, crew, background, watch, across },
+      ...{ leases, arms, arming, locks, stations, apparatus, crew, background, watch, across, databaseDisk },
       takeRigs: (rigs) => taking.takeAll(rigs),
       tellTakenUp: takenUp.resolve,
       closeTasks: async () => workers?.close(),

@@ -10,10 +10,21 @@ export async function freeDisk(folder: string): Promise<number | null> {
   }
 }
 
-/** The least of several folders; one that is not there yet, or does not tell, does not count. */
-export async function freeDisks(folders: readonly string[]): Promise<number | null> {
-  const free = (await Promise.all(folders.map(freeDisk))).filter((part) => part !== null);
-  return free.length === 0 ? null : Math.min(...free);
+export interface Disk {
+  /** In words. */
+  disk: string;
+  /** Part of it that may still be filled, 0 to 1; null where it does not tell. */
+  free(): Promise<number | null>;
+}
+
+/** Of the server's disks, by folders on them, and others the one that is nearest to being full; one that does not tell does not count. */
+export async function fullest(folders: readonly string[], ...others: readonly Disk[]): Promise<{ disk: string; free: number } | null> {
+  const disks = [...folders.map((folder): Disk => ({ disk: 'the disk of the server', free: () => freeDisk(folder) })), ...others];
+  const parts = await Promise.all(disks.map(async (one) => ({ disk: one.disk, free: await one.free() })));
+  return parts.reduce<{ disk: string; free: number } | null>(
+    (least, { disk, free }) => (free !== null && (least === null || free < least.free) ? { disk, free } : least),
+    null,
+  );
 }
 
 /** Bytes that this process may still write on the disk of a folder; null likewise. */

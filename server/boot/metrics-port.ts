@@ -7,6 +7,7 @@ import { readinessOf, type Readiness } from '../http/readiness';
 import type { Services } from '../http/services';
 import { allBrokers } from '../store/brokers';
 import { allRigs } from '../store/rigs';
+import type { DatabaseDisk } from './database-disk';
 import { freeDisk } from './free-disk';
 
 /** Figures of this process for Prometheus, on loopback alone: names of rigs are nobody else's business. */
@@ -18,7 +19,10 @@ export class MetricsPort {
   private server: Server | null = null;
   private readonly lag = monitorEventLoopDelay({ resolution: 20 });
 
-  constructor(private readonly services: Services) {}
+  constructor(
+    private readonly services: Services,
+    private readonly databaseDisk: DatabaseDisk,
+  ) {}
 
   /** @returns the port, or null where none was configured */
   async listen(port: number | null): Promise<number | null> {
@@ -60,7 +64,7 @@ export class MetricsPort {
   private async text(): Promise<string> {
     const { services } = this;
     const readiness = await readinessOf(services);
-    const free = await freeDisk(services.config.stateDir);
+    const [free, ofDatabase] = await Promise.all([freeDisk(services.config.stateDir), this.databaseDisk.free()]);
     return metricsText([
       gauge('evenfall_database_up', 'Whether the database answers.', Number(readiness.database === 'answers')),
       rolesOf(readiness),
@@ -71,6 +75,7 @@ export class MetricsPort {
       gauge('evenfall_memory_bytes', 'Memory of the process.', process.memoryUsage().rss),
       gauge('evenfall_uptime_seconds', 'Age of the process.', process.uptime()),
       ...(free === null ? [] : [gauge('evenfall_disk_free_ratio', 'Free part of the disk of the state folder.', free)]),
+      ...(ofDatabase === null ? [] : [gauge('evenfall_database_disk_free_ratio', 'Free part of the disk of the database.', ofDatabase)]),
       gauge('evenfall_live_streams', 'Pages that follow a run or a line.', services.live.count() + services.lines.count()),
       ...services.answers.metrics(),
       ...(readiness.database === 'answers' ? [...(await this.rigs()), ...(await this.brokers()), ...(await this.work())] : []),

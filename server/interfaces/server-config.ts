@@ -41,6 +41,8 @@ export interface ServerConfig {
   /** Folder of the files that people brought in; not used where they are in S3. */
   filesDir: string;
   s3: S3Place | null;
+  /** Folder on the disk of PostgreSQL's data; null: found out where that is possible. */
+  databaseDir: string | null;
   /** Folder of the built web application; null: none is served. */
   webDir: string | null;
   smtpUrl: string | null;

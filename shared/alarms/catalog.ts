@@ -270,7 +270,7 @@ const kinds = {
     ...morning,
     ...{ onDelayS: 60, offDelayS: 60 },
     title: 'Disk nearly full',
-    cause: 'Less than 10 % of the server’s disk is free.',
+    cause: 'Less than 10 % is free of the server’s disk, or of the database’s where that is known.',
     consequence: 'When nothing more can be stored, runs are held.',
     answer: 'Make room: old archives and files of imports go first.',
   },

@@ -41,7 +41,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
   demo: true,
   ...{ virtualExitDelayS: 5, watchdogS: 3 },
   stateDir: tmpdir(),
-  ...{ webDir: null, filesDir: tmpdir(), s3: null, secretKey: 'the key of the servers of tests: no secret' },
+  ...{ webDir: null, filesDir: tmpdir(), databaseDir: null, s3: null, secretKey: 'the key of the servers of tests: no secret' },
   smtpUrl: null,
   mailFrom: 'Evenfall <evenfall@quillfen.example>',
   ...{ privateHosts: [], cameraHosts: [], metricsPort: null, logLevel: 'silent' },

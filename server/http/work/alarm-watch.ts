@@ -27,8 +27,8 @@ const leastFree = 0.1;
 export interface WatchParts {
   services: Services;
   paceMs?: number | undefined;
-  /** Part of the disk that is free, 0 to 1; null where it cannot be told. */
-  freeDisk(): Promise<number | null>;
+  /** The disk of which the least part is free, and that part, 0 to 1; null where it cannot be told. */
+  freeDisk(): Promise<{ disk: string; free: number } | null>;
 }
 
 type Place = Omit<AlarmPlace, 'labId'> & { labId: string };
@@ -202,10 +202,10 @@ export class AlarmWatch {
   }
 
   private async lookAtDisk(labIds: readonly string[]): Promise<void> {
-    const free = await this.parts.freeDisk();
-    if (free === null) return;
-    const words = `${String(Math.round(100 * free))} % of the disk of the server is free.`;
-    const found: Condition[] = free < leastFree ? [{ code: 'disk-low', subject: '', words, runId: null }] : [];
+    const least = await this.parts.freeDisk();
+    if (least === null) return;
+    const words = `${String(Math.round(100 * least.free))} % of ${least.disk} is free.`;
+    const found: Condition[] = least.free < leastFree ? [{ code: 'disk-low', subject: '', words, runId: null }] : [];
     for (const labId of labIds) {
       const known = await this.knownOf(labId, null);
       await this.settle({ labId, rigId: null }, { known, found, suppressedWhy: null, only: ['disk-low'] });

@@ -111,7 +111,7 @@ const testConfig = (stateDir: string, changes: Partial<ServerConfig>): ServerCon
   secretKey: null,
   stateDir,
   webDir: null,
-  ...{ filesDir: stateDir, s3: null },
+  ...{ filesDir: stateDir, s3: null, databaseDir: null },
   smtpUrl: null,
   mailFrom: 'Evenfall <evenfall@quillfen.example>',
   privateHosts: [],

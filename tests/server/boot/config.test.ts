@@ -18,6 +18,8 @@ test('one variable is enough; the rest has defaults', () => {
 
 test('files lie in the state folder, in a folder of their own, or in a bucket with its key', () => {
   expect(readConfig({ ...least, EVENFALL_STATE_DIR: '/srv/evenfall' })).toMatchObject({ filesDir: '/srv/evenfall/files', s3: null });
+  expect(readConfig(least).databaseDir).toBeNull();
+  expect(readConfig({ ...least, EVENFALL_DATABASE_DIR: '/srv/postgresql' }).databaseDir).toBe('/srv/postgresql');
   expect(readConfig({ ...least, EVENFALL_FILES_DIR: '/srv/files' }).filesDir).toBe('/srv/files');
   const bucket = { ...least, EVENFALL_S3_BUCKET: 'nights', EVENFALL_S3_ENDPOINT: 'https://objects.quillfen.example/' };
   const key = { EVENFALL_S3_KEY_ID: 'id', EVENFALL_S3_SECRET: 'secret' };

@@ -48,7 +48,10 @@ function watchOf(): AlarmWatch {
     locks: { lockedBy: () => null },
     activeRuns: { find: () => undefined, all: () => [] },
   };
-  return new AlarmWatch({ services: services as unknown as Services, freeDisk: () => Promise.resolve(free) });
+  return new AlarmWatch({
+    services: services as unknown as Services,
+    freeDisk: async () => (free === null ? null : { disk: 'the disk of the database', free }),
+  });
 }
 
 /** So many that the database is looked into once more. */
@@ -77,7 +80,7 @@ test('a disk that is nearly full is told after a minute, and is over when there 
   await clock.advance(61_000);
   await looks(watch);
   expect(await alarmOf('disk-low')).toMatchObject({
-    ...{ state: 'active-unacknowledged', rings: 'morning', words: '4 % of the disk of the server is free.' },
+    ...{ state: 'active-unacknowledged', rings: 'morning', words: '4 % of the disk of the database is free.' },
   });
   free = 0.4;
   await looks(watch);
