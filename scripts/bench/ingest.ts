@@ -29,7 +29,8 @@ const sizes = sizesOf([100_000, 1_000_000, 10_000_000]);
 const startUtcMs = Date.UTC(2026, 0, 1);
 const intervalMs = 100;
 const rowsAPiece = 20_000;
-const batchesOfADevice = 200;
+const turns = 20;
+const batchesATurn = 10;
 const greatestSpanRad = 0.06;
 const runId = '5eed0000-0000-4000-8000-000000000900';
 const { lab: labId, rig: rigId } = demoIds;
@@ -144,16 +145,24 @@ async function prepare(database: BenchDatabase): Promise<void> {
   if (!(await insertRun(database.connection.db, row))) throw new Error('the run of the benchmark was refused');
 }
 
-/** What a device's batch of a second costs a channel that holds so many samples already, ms; half of them cost less. */
-async function appendOne({ connection }: BenchDatabase, rows: number): Promise<number> {
+/** What a device's batches of a second cost a channel that holds so many samples already, ms each. */
+async function appendSome({ connection }: BenchDatabase, rows: number, turn: number): Promise<number[]> {
   const { id } = await store.findOrMakeChannel(connection.db, channelOf(`file of ${String(rows)}`));
   const samples = createSampleStore(connection);
   const costs: number[] = [];
-  for (let batch = 0; batch < batchesOfADevice; batch += 1) {
+  for (let batch = turn * batchesATurn; batch < (turn + 1) * batchesATurn; batch += 1) {
     const utcMs = Float64Array.from({ length: 10 }, (_, index) => startUtcMs + (rows + 10 * batch + index) * intervalMs);
-    costs.push(await seconds(() => samples.append(labId, id, { utcMs, value: utcMs.map(Math.sin) })));
+    costs.push(1000 * (await seconds(() => samples.append(labId, id, { utcMs, value: utcMs.map(Math.sin) }))));
   }
-  return 1000 * quantile(costs, 0.5);
+  return costs;
+}
+
+/** Half of the batches cost less. The sizes take turns, so that what PostgreSQL tidies up after so many rows falls on all alike. */
+async function appendInTurns(database: BenchDatabase): Promise<{ size: number; cost: number }[]> {
+  const costs = sizes.map((): number[] => []);
+  for (let turn = 0; turn < turns; turn += 1)
+    for (const [index, size] of sizes.entries()) costs[index]?.push(...(await appendSome(database, size, turn)));
+  return sizes.map((size, index) => ({ size, cost: quantile(costs[index] ?? [], 0.5) }));
 }
 
 const greatestMemoryMiB = () => process.resourceUsage().maxRSS / 1024;
@@ -179,8 +188,7 @@ async function run(): Promise<void> {
       report({ name: 'ingest growth', value: growth(points), unit: 'exponent', goal: 1.1, want: 'at most', peer: null });
       // When all is stored: writing out what was copied just before must not be taken for the size of a channel.
       await database.connection.pool.query('checkpoint');
-      const appends: typeof points = [];
-      for (const size of sizes) appends.push({ size, cost: await appendOne(database, size) });
+      const appends = await appendInTurns(database);
       for (const { size, cost } of appends)
         report({ name: `ingest batch of a second after ${String(size)}`, value: cost, unit: 'ms', goal: null, want: 'told', peer: null });
       report({ name: 'ingest batch growth', value: growth(appends), unit: 'exponent', goal: 0.2, want: 'at most', peer: null });
