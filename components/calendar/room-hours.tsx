@@ -123,7 +123,10 @@ function HoursSheet({ rig, hours, onClose }: { rig: { id: string; name: string }
           />
         </View>
       )}
-      <Section title="Blackout dates" remark="Nothing starts by itself on these days, first and last included.">
+      <Section
+        title="Blackout dates"
+        remark="Whole days, first and last included: no scheduled run begins on one, and none that would go on into it, as the night before."
+      >
         {blackouts.map((blackout, index) => (
           <View key={index} className="gap-3 border-b border-line pb-3">
             <View className="flex-row items-end gap-3">

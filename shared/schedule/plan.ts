@@ -29,10 +29,11 @@ export const schedulePlanSchema = z.discriminatedUnion('kind', [
 ]);
 export type SchedulePlan = z.infer<typeof schedulePlanSchema>;
 
-/** The hours in which the room is quiet, and the days on which nothing may start. */
+/** The hours in which the room is quiet, and the days on which no scheduled run may be in it. */
 export const roomHoursSchema = z.strictObject({
   /** A run may go on only between these times of day; null: at any time. The window may pass midnight. */
   nightWindow: z.strictObject({ from: localTimeSchema, until: localTimeSchema }).nullable(),
+  /** Whole days of the lab, from midnight to midnight: no scheduled run begins on one or goes on into it. */
   blackouts: z
     .array(
       z

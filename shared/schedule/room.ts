@@ -14,9 +14,16 @@ export const overlap = (a: Stay, b: Stay): boolean => a.startUtcMs < b.endUtcMs 
 
 /** Why a stay may not be in the room, in one sentence; null where nothing stands against it. */
 export function againstRoom(hours: RoomHours, stay: Stay, timeZone: string): string | null {
-  const day = formatDay(stay.startUtcMs, timeZone);
-  const blackout = hours.blackouts.find(({ from, until }) => from <= day && day <= until);
-  if (blackout !== undefined) return `${day} is a blackout date: ${blackout.why}.`;
+  // One that ends at midnight is not in the room on the day after.
+  const [first, last] = [stay.startUtcMs, Math.max(stay.startUtcMs, stay.endUtcMs - 1)].map((utcMs) => formatDay(utcMs, timeZone)) as [
+    string,
+    string,
+  ];
+  const blackout = hours.blackouts.find(({ from, until }) => from <= last && first <= until);
+  if (blackout !== undefined)
+    return first >= blackout.from
+      ? `${first} is a blackout date: ${blackout.why}.`
+      : `It would go on into ${blackout.from}, which is a blackout date: ${blackout.why}.`;
   const { nightWindow } = hours;
   if (nightWindow === null || withinWindow(nightWindow, stay, timeZone)) return null;
   const clock = (utcMs: number) => formatClock(utcMs, { timeZone });

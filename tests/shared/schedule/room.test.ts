@@ -39,11 +39,19 @@ test('a window by day', () => {
   expect(againstRoom(day, stay('2031-02-14T08:00:00Z', '2031-02-15T08:00:00Z'), 'Europe/Zurich')).not.toBeNull();
 });
 
-test('nothing starts on a blackout date of the lab, and the reason is said', () => {
+test('no run begins on a blackout date of the lab or goes on into one, and the reason is said', () => {
   const hours = { ...openHours, blackouts: [{ from: '2031-02-14', until: '2031-02-16', why: 'floor is laid' }] };
   expect(againstRoom(hours, stay('2031-02-16T21:00:00Z', '2031-02-17T05:00:00Z'), 'Europe/Zurich')).toBe(
     '2031-02-16 is a blackout date: floor is laid.',
   );
+  // The night before would go on into it; one that is over at midnight, 23:00 by UTC, would not.
+  expect(againstRoom(hours, stay('2031-02-13T21:00:00Z', '2031-02-14T05:00:00Z'), 'Europe/Zurich')).toBe(
+    'It would go on into 2031-02-14, which is a blackout date: floor is laid.',
+  );
+  expect(againstRoom(hours, stay('2031-02-13T21:00:00Z', '2031-02-13T23:00:00Z'), 'Europe/Zurich')).toBeNull();
+  expect(againstRoom(hours, stay('2031-02-13T21:00:00Z', '2031-02-13T23:00:01Z'), 'Europe/Zurich')).not.toBeNull();
+  // A stay of three days has it in its middle.
+  expect(againstRoom(hours, stay('2031-02-13T21:00:00Z', '2031-02-17T05:00:00Z'), 'Europe/Zurich')).toContain('2031-02-14');
   // Half past midnight of the 17th in Zurich is still the 16th in UTC.
   expect(againstRoom(hours, stay('2031-02-16T23:30:00Z', '2031-02-17T05:00:00Z'), 'Europe/Zurich')).toBeNull();
 });
