@@ -1,3 +1,4 @@
+import { tryPlan } from '@/scripts/soak/clock/try-plan';
 import { tryRule } from '@/scripts/soak/clock/try-rule';
 import { tryFirst } from '@/scripts/soak/seeded/try-seeds';
 import { occurrencesBetween } from '@/shared/schedule/occurrences';
@@ -12,6 +13,10 @@ const startsOf = (plan: SchedulePlan, zone: string, from: string, until: string)
 
 test('the recurring starts of a year are those of an independent calendar in eight zones, across all changes of the clocks', async () => {
   expect(await tryFirst(24, tryRule)).toEqual([]);
+});
+
+test('plans of every kind, with a night window and blackout dates, start when an independent calendar says, and only when the room is free', async () => {
+  expect(await tryFirst(80, tryPlan)).toEqual([]);
 });
 
 test('a time that the spring change leaves out is the moment of the change, and said', () => {
