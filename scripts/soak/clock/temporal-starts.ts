@@ -18,11 +18,7 @@ export const zones = [
 ] as const;
 
 /** UTC ms of the starts in a span, day by day: the first instant of the time of day, or where it is left out the instant of the change. */
-export function temporalStarts(
-  plan: SchedulePlan,
-  timeZone: string,
-  { fromMs, untilMs }: { fromMs: number; untilMs: number },
-): number[] {
+export function temporalStarts(plan: SchedulePlan, timeZone: string, { fromMs, untilMs }: { fromMs: number; untilMs: number }): number[] {
   const found: number[] = [];
   const time = Temporal.PlainTime.from(plan.time);
   const dayOf = (ms: number) => Temporal.Instant.fromEpochMilliseconds(ms).toZonedDateTimeISO(timeZone).toPlainDate();
@@ -45,16 +41,20 @@ function isDay(plan: SchedulePlan, day: Temporal.PlainDate): boolean {
   return plan.until === null || day.toString() <= plan.until;
 }
 
-/** Whether a stay may be in the room by the clocks on the wall: its first day is no blackout date, and both its ends lie within the window of one night. */
+/** Whether a stay may be in the room: it shares no moment with the days of a blackout, and by the clocks on the wall both its ends lie within the window of one night. */
 export function temporalRoom({ nightWindow, blackouts }: RoomHours, stay: Stay, timeZone: string): boolean {
+  const midnight = (day: Temporal.PlainDate) => day.toZonedDateTime(timeZone).epochMilliseconds;
+  const isBlocked = blackouts.some(({ from, until }) => {
+    const [opens, closes] = [midnight(Temporal.PlainDate.from(from)), midnight(Temporal.PlainDate.from(until).add({ days: 1 }))];
+    return stay.startUtcMs < closes && opens < stay.endUtcMs;
+  });
+  if (isBlocked) return false;
+  if (nightWindow === null) return true;
+  if (stay.endUtcMs - stay.startUtcMs > 86_400_000) return false;
   const [start, end] = [stay.startUtcMs, stay.endUtcMs].map((ms) =>
     Temporal.Instant.fromEpochMilliseconds(ms).toZonedDateTimeISO(timeZone).toPlainDateTime(),
   ) as [Temporal.PlainDateTime, Temporal.PlainDateTime];
   const day = start.toPlainDate();
-  const { compare } = Temporal.PlainDate;
-  if (blackouts.some(({ from, until }) => compare(from, day) <= 0 && compare(day, until) <= 0)) return false;
-  if (nightWindow === null) return true;
-  if (stay.endUtcMs - stay.startUtcMs > 86_400_000) return false;
   const { from, until } = nightWindow;
   const passesMidnight = Temporal.PlainTime.compare(from, until) >= 0;
   return [0, 1].some((nights) => {
