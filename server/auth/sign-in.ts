@@ -23,11 +23,15 @@ export async function signOut(parts: AuthParts, who: { token: string; user: Pick
 /** An act of a person that concerns every lab the person is in. */
 export async function auditInAllLabs(
   tx: Transaction,
-  act: { user: Pick<User, 'id' | 'name'>; kind: string },
+  act: { user: Pick<User, 'id' | 'name'>; kind: string; data?: Record<string, unknown> },
   { clock, sha256 }: Pick<AuthParts, 'clock' | 'sha256'>,
 ): Promise<void> {
   // Always in the same order, so that two people who share labs cannot wait for each other's chains.
   const labIds = (await membershipsOf(tx, act.user.id)).map((membership) => membership.labId).sort();
   for (const labId of labIds)
-    await appendAudit(tx, { labId, who: { id: act.user.id, name: act.user.name }, kind: act.kind, data: {}, utcMs: clock.utcMs() }, sha256);
+    await appendAudit(
+      tx,
+      { labId, who: { id: act.user.id, name: act.user.name }, kind: act.kind, data: act.data ?? {}, utcMs: clock.utcMs() },
+      sha256,
+    );
 }

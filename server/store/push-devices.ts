@@ -4,14 +4,23 @@ import { one, type Handle } from './database';
 
 export type PushDeviceRecord = typeof pushSubscriptions.$inferSelect;
 
-/** A browser that takes push messages for whoever is signed in there now; the same one again changes hands. */
+/** A browser that takes push messages for whoever is signed in there now; the same one again changes hands. `isNew`: it took none for this account before. */
 export async function putPushDevice(
   db: Handle,
   device: Pick<PushDeviceRecord, 'userId' | 'endpoint' | 'p256dh' | 'auth' | 'device' | 'madeAt'>,
-): Promise<PushDeviceRecord> {
+): Promise<PushDeviceRecord & { isNew: boolean }> {
   const { userId, p256dh, auth, device: name, madeAt } = device;
+  const [before] = await db
+    .select({ userId: pushSubscriptions.userId })
+    .from(pushSubscriptions)
+    .where(eq(pushSubscriptions.endpoint, device.endpoint));
   const set = { userId, p256dh, auth, device: name, madeAt };
-  return one(await db.insert(pushSubscriptions).values(device).onConflictDoUpdate({ target: pushSubscriptions.endpoint, set }).returning());
+  const rows = await db
+    .insert(pushSubscriptions)
+    .values(device)
+    .onConflictDoUpdate({ target: pushSubscriptions.endpoint, set })
+    .returning();
+  return { ...one(rows), isNew: before?.userId !== userId };
 }
 
 export const pushDevicesOf = (db: Handle, userId: string): Promise<PushDeviceRecord[]> =>
@@ -29,9 +38,10 @@ export async function countPushDevices(db: Handle, userIds: readonly string[]): 
 
 const own = ({ userId, id }: { userId: string; id: string }) => and(eq(pushSubscriptions.userId, userId), eq(pushSubscriptions.id, id));
 
-/** False where the account has no such browser. */
-export async function removePushDevice(db: Handle, device: { userId: string; id: string }): Promise<boolean> {
-  return (await db.delete(pushSubscriptions).where(own(device))).rowCount === 1;
+/** What the browser was called; null where the account has no such one. */
+export async function removePushDevice(db: Handle, device: { userId: string; id: string }): Promise<string | null> {
+  const rows = await db.delete(pushSubscriptions).where(own(device)).returning({ name: pushSubscriptions.device });
+  return rows[0]?.name ?? null;
 }
 
 export async function notePushed(db: Handle, device: { userId: string; id: string }, lastSentAt: number): Promise<void> {

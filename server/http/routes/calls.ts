@@ -1,13 +1,14 @@
 import * as contracts from '@/shared/contracts/calls';
 import type { OnCall, PushDevice, WatcherView } from '@/shared/contracts/calls';
 import { calleesOf } from '@/shared/alarms/rings';
+import { auditInAllLabs } from '@/server/auth/sign-in';
 import { RefusedAddress } from '@/server/interfaces/outgoing';
 import { checkedUrl } from '@/server/notify/outgoing';
 import { tellPerson } from '@/server/notify/tell';
 import * as store from '@/server/store/calls';
 import { countPushDevices, pushDevicesOf, putPushDevice, removePushDevice, type PushDeviceRecord } from '@/server/store/push-devices';
 import { countUse } from '@/server/store/rate-limits';
-import { audited } from '../audited';
+import { audited, auditLater } from '../audited';
 import { isoOf, isoOrNull } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
@@ -54,7 +55,8 @@ const calling = [
     return body;
   }),
 
-  mount(contracts.tryCall, async ({ me, membership, services, res }) => {
+  mount(contracts.tryCall, async (context) => {
+    const { me, membership, services, res } = context;
     const nowUtcMs = services.clock.utcMs();
     const seconds = await countUse(services.database.db, trialRate, { subject: services.sha256(me.userId), nowUtcMs });
     if (seconds !== null) {
@@ -66,7 +68,9 @@ const calling = [
       paragraphs: ['This is how an alarm would reach you. Nothing is wrong.'],
       ...{ path: '/alarms', tag: 'trial', quiet: false },
     };
-    return { items: await tellPerson(services.tell, { userId: me.userId, email: me.email }, message) };
+    const items = await tellPerson(services.tell, { userId: me.userId, email: me.email }, message);
+    auditLater(context, 'member.trial-sent', { outcomes: items.map(({ means, outcome }) => `${means}: ${outcome}`) });
+    return { items };
   }),
 ];
 
@@ -119,12 +123,21 @@ const pushing = [
     assertAddress(body.endpoint, 'endpoint', services);
     const { endpoint, keys, device } = body;
     const wanted = { userId: me.userId, endpoint, ...keys, device, madeAt: services.clock.utcMs() };
-    return deviceViewOf(await putPushDevice(services.database.db, wanted));
+    return services.database.db.transaction(async (tx) => {
+      const put = await putPushDevice(tx, wanted);
+      if (put.isNew)
+        await auditInAllLabs(tx, { user: { id: me.userId, name: me.name }, kind: 'person.device-added', data: { device } }, services);
+      return deviceViewOf(put);
+    });
   }),
 
   mount(contracts.removePushDevice, async ({ me, params, services }) => {
-    if (!(await removePushDevice(services.database.db, { userId: me.userId, id: params.deviceId }))) throw notFound('device');
-    return undefined;
+    return services.database.db.transaction(async (tx) => {
+      const device = await removePushDevice(tx, { userId: me.userId, id: params.deviceId });
+      if (device === null) throw notFound('device');
+      await auditInAllLabs(tx, { user: { id: me.userId, name: me.name }, kind: 'person.device-removed', data: { device } }, services);
+      return undefined;
+    });
   }),
 ];
 

@@ -6,6 +6,7 @@ import { inTurns } from '@/server/ingest/receive-file';
 import * as store from '@/server/store/import-files';
 import { findRig } from '@/server/store/rigs';
 import { attach, fileWords } from '../attachment';
+import { audited } from '../audited';
 import { assertRoom, bytesOf, loadImport, loadRun, receivePart, receiveWhole, storedAlready, tooLarge } from '../import-file';
 import { isoOf, isoOrNull } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
@@ -31,19 +32,22 @@ const viewOf = (file: store.ImportRecord): ImportView => ({
 });
 
 export const importFileRoutes = [
-  mount(contracts.beginImport, async ({ params, membership, services, body, me }) => {
+  mount(contracts.beginImport, async (context) => {
+    const { params, membership, services, body, me } = context;
     const run = await loadRun(services, membership.labId, params.runId);
     const { fileName, bytes = null, changedAt } = body;
     if (bytes !== null && bytes > services.config.limits.importBytes) throw tooLarge(fileName, services);
     await assertRoom(services, fileName, bytes ?? 0);
-    return viewOf(
-      await store.beginImport(services.database.db, {
+    const entry = { kind: 'run.file-begun', data: (file: store.ImportRecord) => ({ runId: run.id, importId: file.id, fileName }) };
+    const begun = await audited(context, entry, (tx) =>
+      store.beginImport(tx, {
         ...{ labId: run.labId, runId: run.id, fileName, wantedBytes: bytes },
         changedAt: changedAt === undefined ? null : Date.parse(changedAt),
         createdAt: services.clock.utcMs(),
         createdBy: me.name,
       }),
     );
+    return viewOf(begun);
   }),
 
   mount(contracts.listImports, async ({ params, membership, services }) => {
@@ -55,9 +59,13 @@ export const importFileRoutes = [
     viewOf(await loadImport(services, membership.labId, params.importId)),
   ),
 
-  mount(contracts.cancelImport, async ({ params, membership, services }) => {
+  mount(contracts.cancelImport, async (context) => {
+    const { params, membership, services } = context;
     const file = await loadImport(services, membership.labId, params.importId);
-    if (!(await store.forgetImport(services.database.db, { labId: file.labId, importId: file.id }))) throw storedAlready(file);
+    const entry = { kind: 'run.file-given-up', data: () => ({ runId: file.runId, importId: file.id, fileName: file.fileName }) };
+    await audited(context, entry, async (tx) => {
+      if (!(await store.forgetImport(tx, { labId: file.labId, importId: file.id }))) throw storedAlready(file);
+    });
     return undefined;
   }),
 

@@ -6,11 +6,11 @@ import { checkProtocol } from '@/shared/protocol/check';
 import type { Step } from '@/shared/protocol/document';
 import * as store from '@/server/store/protocols';
 import { findRig } from '@/server/store/rigs';
-import { audited } from '../audited';
+import { audited, enterAudit } from '../audited';
 import { isoOf, makerOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { refusalOf } from '../refused-protocol';
-import { mount, type Membership } from '../route-context';
+import { mount, type Membership, type SignedIn } from '../route-context';
 import type { Services } from '../services';
 
 const countSteps = (steps: readonly Step[]): number =>
@@ -63,6 +63,24 @@ function editedMeanwhile(protocol: store.ProtocolRecord, membership: Membership)
   );
 }
 
+/** An editor saves after each pause of its user: what one person edits without a longer one is one entry. */
+const oneEditMs = 15 * 60_000;
+
+function saveDraft(
+  context: { me: SignedIn; membership: Membership; services: Services },
+  draft: Parameters<typeof store.saveDraft>[1],
+  before: store.ProtocolRecord,
+): Promise<boolean> {
+  const maker = makerOf(context);
+  return context.services.database.db.transaction(async (tx) => {
+    const saved = await store.saveDraft(tx, draft, maker);
+    const goesOn = before.updatedById === maker.userId && maker.at - before.updatedAt < oneEditMs && before.version > 1;
+    const data = { protocolId: before.id, name: draft.document.name, fromVersion: before.version };
+    if (saved && !goesOn) await enterAudit(tx, context, { kind: 'protocol.edited', data });
+    return saved;
+  });
+}
+
 export const protocolRoutes = [
   mount(contracts.listProtocols, async ({ membership, services }) => {
     const found = await store.listProtocols(services.database.db, membership.labId);
@@ -92,7 +110,7 @@ export const protocolRoutes = [
     if (versionOf(before) !== ifMatch) throw editedMeanwhile(before, membership);
     const same = canonicalize(before.document) === canonicalize(body.document);
     const draft = { labId: membership.labId, protocolId: before.id, expectedVersion: before.version, document: body.document };
-    const saved = same || (await store.saveDraft(services.database.db, draft, makerOf(context)));
+    const saved = same || (await saveDraft(context, draft, before));
     const after = await load(services, membership.labId, params.protocolId);
     if (!saved) throw editedMeanwhile(after, membership);
     context.setEtag(versionOf(after));

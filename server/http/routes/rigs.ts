@@ -1,7 +1,7 @@
 import * as contracts from '@/shared/contracts/rigs';
 import * as store from '@/server/store/rigs';
 import { activeRuns } from '@/server/store/runs-read';
-import { audited } from '../audited';
+import { audited, auditLater } from '../audited';
 import { anyRig, atTheRig, rigOfAddress } from '../desk/at-the-rig';
 import { isoOf, makerOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
@@ -135,7 +135,9 @@ const linkRoutes = [
   mount(contracts.tryLink, async (context) => {
     const rig = await load(context, context.params.rigId);
     await assertUntouched(context.services, rig);
-    return context.services.stations.tryLine(rig, context.body);
+    const answer = await context.services.stations.tryLine(rig, context.body);
+    auditLater(context, 'rig.link-tried', { rigId: rig.id, with: context.body, ok: answer.ok });
+    return answer;
   }),
 ];
 

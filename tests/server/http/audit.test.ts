@@ -3,7 +3,8 @@ import { demoIds, demoPeople } from '@/db/demo/seed';
 import { appendAudit, auditLinks } from '@/server/store/audit';
 import type { AuditCheck, AuditEntry } from '@/shared/contracts/audit';
 import { databaseOfThisFile } from '@/tests/support/database';
-import { LabServer, sha256 } from '@/tests/support/lab-server';
+import { LabServer, quickProtocol, sha256 } from '@/tests/support/lab-server';
+import { makeRun, runStart } from '../store/rows';
 
 /** What owners read of the audit chain: who did what and when, and how far the chain is whole. */
 
@@ -89,4 +90,56 @@ test('the check says how far the chain is whole, who stands in it and what they 
     upToSeq: changed - 1,
     broken: { seq: changed, why: expect.stringContaining('was changed') },
   });
+});
+
+test('what people do beside the runs is in the chain: drafts by turns, a line that is tried, a trial call, files, browsers that take push messages', async () => {
+  const of = async (kind: string) =>
+    ((await lab.as('owner', 'GET', `${path}/audit?kind=${kind}`).expect(200)).body.items as AuditEntry[])
+      .map(({ who, data: { who: _account, ...data } }) => ({ who, data }))
+      .reverse();
+  const made = await lab.as('operator', 'POST', `${path}/protocols`).send({ document: quickProtocol() }).expect(201);
+  const protocolId = made.body.id as string;
+  let etag = made.headers.etag as string;
+  const save = async (who: 'operator' | 'keeper', name: string) => {
+    const document = quickProtocol({ name });
+    const saved = await lab.as(who, 'PUT', `${path}/protocols/${protocolId}`).set('If-Match', etag).send({ document }).expect(200);
+    etag = saved.headers.etag as string;
+  };
+  // As an editor does, again and again while somebody types; then somebody else, and the next day the first one.
+  for (const name of ['N', 'Ni', 'Night']) await save('operator', name);
+  await save('keeper', 'Night, long');
+  await save('keeper', 'Night, long');
+  await lab.advance(16 * 60_000);
+  await save('keeper', 'Night, short');
+  expect((await of('protocol.edited')).map(({ who, data }) => [who, data])).toEqual([
+    ['Ilse Marrowby', { protocolId, name: 'N', fromVersion: 1 }],
+    ['Casimir Thornquist', { protocolId, name: 'Night, long', fromVersion: 4 }],
+    ['Casimir Thornquist', { protocolId, name: 'Night, short', fromVersion: 5 }],
+  ]);
+
+  const line = { kind: 'simulated' };
+  await lab.as('keeper', 'POST', `${path}/rigs/${demoIds.rig}/link/try`).send(line).expect(200);
+  await lab.as('keeper', 'POST', `${path}/on-call/trial`).expect(200);
+  await lab.services.idle();
+  expect((await of('rig.link-tried')).map(({ data }) => data)).toEqual([{ rigId: demoIds.rig, with: line, ok: true }]);
+  expect((await of('member.trial-sent')).map(({ who }) => who)).toEqual(['Casimir Thornquist']);
+
+  const start = runStart(demoIds.lab, demoIds.rig);
+  expect(await makeRun(db(), start)).toBe(true);
+  const files = `${path}/runs/${start.runId}/imports`;
+  const begun = await lab.as('analyst', 'POST', files).send({ fileName: 'night.csv' }).expect(201);
+  const importId = begun.body.id as string;
+  await lab.as('analyst', 'DELETE', `${path}/imports/${importId}`).expect(204);
+  const file = { runId: start.runId, importId, fileName: 'night.csv' };
+  expect((await of('run.file-begun')).map(({ data }) => data)).toEqual([file]);
+  expect((await of('run.file-given-up')).map(({ data }) => data)).toEqual([file]);
+
+  const keys = { p256dh: 'B'.repeat(87), auth: 'A'.repeat(22) };
+  const browser = { endpoint: 'https://push.example/ilse', keys, device: 'Telephone' };
+  const taken = await lab.as('operator', 'POST', '/push/subscriptions').send(browser).expect(201);
+  // A page says it again each time; that is nothing new.
+  await lab.as('operator', 'POST', '/push/subscriptions').send(browser).expect(201);
+  await lab.as('operator', 'DELETE', `/push/subscriptions/${taken.body.id as string}`).expect(204);
+  expect((await of('person.device-added')).map(({ who, data }) => [who, data])).toEqual([['Ilse Marrowby', { device: 'Telephone' }]]);
+  expect((await of('person.device-removed')).map(({ data }) => data)).toEqual([{ device: 'Telephone' }]);
 });
