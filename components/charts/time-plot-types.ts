@@ -40,6 +40,8 @@ export interface TimePlotProps {
   value: ArrayLike<number>;
   unit: string;
   timeZone: string;
+  /** Standard uncertainty that the channel's calibration leaves in a value, in `unit`; absent where none is known. */
+  uOf?: ((value: number) => number) | undefined;
   /** What is shown, for those who do not see it. */
   title: string;
   view: TimeView;

@@ -2,7 +2,7 @@ import 'uplot/dist/uPlot.min.css';
 import { memo, useMemo, useRef } from 'react';
 import { View } from 'react-native';
 import { useTheme } from '@/components/theme';
-import { formatReading } from '@/shared/lib/format-angle';
+import { formatKnownReading } from '@/shared/lib/format-angle';
 import { formatClock } from '@/shared/lib/format-time';
 import { extent } from './curve';
 import { HiddenTable } from './hidden-table';
@@ -47,23 +47,26 @@ export function TimePlot(props: TimePlotProps) {
           if (onKey?.(event.shiftKey && event.key.startsWith('Arrow') ? `Shift+${event.key}` : event.key) === true) event.preventDefault();
         }}
       />
-      <PlotTable {...{ utcMs, value, unit, timeZone, title }} from={view.span.from} to={view.span.to} />
+      <PlotTable {...{ utcMs, value, unit, uOf: props.uOf, timeZone, title }} from={view.span.from} to={view.span.to} />
     </View>
   );
 }
 
-type PlotTableProps = Pick<TimePlotProps, 'utcMs' | 'value' | 'unit' | 'timeZone' | 'title'> & TimeSpan;
+type PlotTableProps = Pick<TimePlotProps, 'utcMs' | 'value' | 'unit' | 'uOf' | 'timeZone' | 'title'> & TimeSpan;
 
 /** Least and greatest in twelve parts of the shown time: what a listener can take in. */
-const PlotTable = memo(function PlotTable({ utcMs, value, unit, timeZone, title, from, to }: PlotTableProps) {
+const PlotTable = memo(function PlotTable({ utcMs, value, unit, uOf, timeZone, title, from, to }: PlotTableProps) {
   const rows = useMemo(() => {
     const length = (to - from) / 12;
     return Array.from({ length: 12 }, (_, index) => {
       const start = from + index * length;
       const found = extent({ x: utcMs, y: value }, start, start + length);
-      const cells = found === null ? ['no data', 'no data'] : found.map((y) => formatReading(y, unit));
+      const cells =
+        found === null
+          ? ['no data', 'no data']
+          : found.map((y) => formatKnownReading({ value: y, u: uOf === undefined ? null : uOf(y) }, unit));
       return [formatClock(start, { timeZone, precision: 'seconds' }), ...cells];
     });
-  }, [utcMs, value, unit, timeZone, from, to]);
+  }, [utcMs, value, unit, uOf, timeZone, from, to]);
   return <HiddenTable caption={title} columns={['From', 'Least', 'Greatest']} rows={rows} />;
 });

@@ -5,7 +5,9 @@ import { readingAt } from '@/components/charts/reading';
 import { TimePlot } from '@/components/charts/time-plot';
 import { axisUnit, type TimePlotProps, type TimeSpan } from '@/components/charts/time-plot-types';
 import { Body, Icon, Label, Num } from '@/components/ui';
-import type { ChannelView } from '@/shared/contracts/data';
+import type { ChannelView, readSamples } from '@/shared/contracts/data';
+import type { ResponseOf } from '@/shared/contracts/route';
+import { uOfCalibrated } from '@/shared/statistics/calibration';
 import { readingWords } from './reading-words';
 import { useRunSamples } from './use-run-samples';
 
@@ -20,15 +22,28 @@ export interface PlottedSeries {
   gapMs?: number | undefined;
   /** Standard uncertainty of a reading where it is known; else it is told by the scatter. */
   uAt?: ((utcMs: number) => number | null) | undefined;
+  /** What the calibration leaves in a value beside its scatter; absent where none is known. */
+  uOf?: ((value: number) => number) | undefined;
 }
+
+/** Values as the server calibrated them, with what the calibration leaves open. */
+export function seriesOf({ utcMs, value, total, calibration }: ResponseOf<typeof readSamples>, unit: string): PlottedSeries {
+  const uOf = calibration === null ? {} : { uOf: (one: number) => uOfCalibrated(calibration, one) };
+  return { utcMs, value, unit, thinned: total > utcMs.length, ...uOf };
+}
+
+/** u of a reading by its scatter, with that of its calibration. */
+const together = (scatter: number | null, calibration: number) => Math.hypot(scatter ?? 0, calibration);
 
 /** What a series says under the cursor; nothing without one. */
 export function useReadingWords(series: PlottedSeries | null, cursor: number | null): string {
   return useMemo(() => {
     if (series === null || cursor === null) return '';
-    const { utcMs, value, unit, thinned, gapMs, uAt } = series;
+    const { utcMs, value, unit, thinned, gapMs, uAt, uOf } = series;
     const reading = readingAt({ x: utcMs, y: value }, cursor, { thinned, gapMs });
-    return readingWords(reading?.kind === 'value' && uAt !== undefined ? { ...reading, u: uAt(cursor) } : reading, unit);
+    if (reading?.kind !== 'value') return readingWords(reading, unit);
+    const byScatter = uOf === undefined ? reading.u : together(reading.u, uOf(reading.value));
+    return readingWords({ ...reading, u: uAt === undefined ? byScatter : uAt(cursor) }, unit);
   }, [series, cursor]);
 }
 
@@ -93,10 +108,7 @@ export function ChannelPane({
 }: Omit<PaneProps, 'name' | 'title' | 'series' | 'empty'> & { runId: string; channel: ChannelView; wanted: TimeSpan | null }) {
   const samples = useRunSamples(runId, channel.id, { span: wanted, enabled: pane.open });
   const data = samples.data?.data ?? null;
-  const series = useMemo(
-    () => (data === null ? null : { utcMs: data.utcMs, value: data.value, unit: channel.unit, thinned: data.total > data.utcMs.length }),
-    [data, channel.unit],
-  );
+  const series = useMemo(() => (data === null ? null : seriesOf(data, channel.unit)), [data, channel.unit]);
   const empty = samples.isError ? 'It could not be loaded.' : samples.isPending ? 'Loading' : 'No samples in this time.';
   return <Pane {...pane} name={channel.name} title={channel.name} series={series} empty={empty} />;
 }

@@ -1,6 +1,5 @@
 import type { Reading } from '@/components/charts/reading';
-import { formatDeflectionUncertain, formatReading } from '@/shared/lib/format-angle';
-import { formatUncertain } from '@/shared/lib/format-uncertain';
+import { formatKnownReading, formatReading } from '@/shared/lib/format-angle';
 
 /** What a plot reads out under its cursor, in the unit of the channel. Pure. */
 export function readingWords(reading: Reading | null, unit: string): string {
@@ -9,7 +8,5 @@ export function readingWords(reading: Reading | null, unit: string): string {
     const [least, greatest] = [formatReading(reading.least, unit), formatReading(reading.greatest, unit)];
     return least === greatest ? least : `${least} to ${greatest}`;
   }
-  const { value, u } = reading;
-  if (u === null) return formatReading(value, unit);
-  return unit === 'rad' ? formatDeflectionUncertain({ value, u }, { signed: true }) : formatUncertain({ value, u, unit });
+  return formatKnownReading(reading, unit);
 }

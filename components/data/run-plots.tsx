@@ -19,7 +19,7 @@ import { ExcludeSheet } from './exclude-sheet';
 import { ExclusionList, type Exclusions } from './exclusion-list';
 import { ExportLinks } from './export-links';
 import { MarkBar, useMarking } from './mark-bar';
-import { ChannelPane, Pane, useReadingWords, type Linked, type PlottedSeries } from './plotted-channel';
+import { ChannelPane, Pane, seriesOf, useReadingWords, type Linked, type PlottedSeries } from './plotted-channel';
 import { excludedWords, touching } from './stretch';
 import { ThinnedNote } from './thinned-note';
 import { turntableSeries } from './turntable-series';
@@ -91,15 +91,7 @@ function LinkedPlots({ runId, channel, others, exclusions, coarse, whole }: Link
   const [tapped, setTapped] = useState<readonly string[]>([]);
   const rows = useLabQuery(listSteps, { params: { runId } }).data?.data.items ?? noRows;
   const samples = useRunSamples(runId, channel.id, { span: wanted }).data?.data ?? coarse;
-  const series = useMemo<PlottedSeries>(
-    () => ({
-      utcMs: samples.utcMs,
-      value: samples.value,
-      unit: channel.unit,
-      thinned: samples.total > samples.utcMs.length,
-    }),
-    [samples, channel.unit],
-  );
+  const series = useMemo<PlottedSeries>(() => seriesOf(samples, channel.unit), [samples, channel.unit]);
   const words = useReadingWords(series, hand.cursor);
   const told = excludedWords(exclusions.exclusions, timeZone);
   const linked: Linked = {
@@ -154,7 +146,8 @@ function LinkedPlots({ runId, channel, others, exclusions, coarse, whole }: Link
       <Label>
         {formatFixed(coarse.total, { decimals: 0 })} samples
         {coarse.total > coarse.utcMs.length ? '; least and greatest of each stretch are drawn, all of them when you look closer' : ''}. In
-        brackets: how far single readings scatter about there (k = 1).
+        brackets: how far single readings scatter about there (k = 1)
+        {samples.calibration === null ? '' : `, with the u of their calibration, revision ${String(samples.calibration.revision)}`}.
       </Label>
       <ThinnedNote thinned={samples.thinned} />
       {hand.cursor === null ? null : (

@@ -7,6 +7,7 @@ import { PlanView } from '@/components/charts/plan-view';
 import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, Section, useWide } from '@/components/ui';
 import type { RigView } from '@/shared/contracts/rigs';
 import { ArmPanel } from './arm-panel';
+import { ChannelCalibrations } from './channel-calibrations';
 import { ChannelLimits } from './channel-limits';
 import { DevicesPanel } from './devices-panel';
 import { linkState } from './link-words';
@@ -57,6 +58,7 @@ export function RigScreen() {
           <RigDocumentSection rig={rig} etag={query.data?.etag ?? undefined} />
           <MassSets rig={rig} />
           <ChannelLimits rigId={rig.id} />
+          <ChannelCalibrations rigId={rig.id} />
         </>
       }
     >

@@ -5,12 +5,13 @@ import { readDecimal } from '@/components/ui/read-decimal';
 import { formatFixed, formatPercent, formatSignificant } from '@/shared/lib/format-number';
 import { formatUncertain } from '@/shared/lib/format-uncertain';
 import { meanPxOf } from '@/shared/spot/health';
-import { fitScale, type Mark } from '@/shared/spot/scale';
+import { fitScale, lineOf, type Mark } from '@/shared/spot/scale';
+import { KeepScale } from './keep-scale';
 import { NumberField } from './number-field';
 import type { SpotPage } from './use-spot-reader';
 
 /** Which column shows which millimetre: marks, the line through them, and how far each is off it. */
-export function ScalePanel({ page, linePx }: { page: SpotPage; linePx: number | null }) {
+export function ScalePanel({ page, rigId, linePx }: { page: SpotPage; rigId: string; linePx: number | null }) {
   const { setting, change } = page;
   const { marks, uMarkMm } = setting;
   const scale = fitScale(marks, uMarkMm);
@@ -55,6 +56,9 @@ export function ScalePanel({ page, linePx }: { page: SpotPage; linePx: number | 
           testID="u-mark"
         />
         {marks.length < 2 ? null : <Fit marks={marks} uMarkMm={uMarkMm} />}
+        {scale === null || setting.channel === '' ? null : (
+          <KeepScale rigId={rigId} channel={setting.channel} scale={scale} marks={marks.length} />
+        )}
       </Panel>
     </Section>
   );
@@ -110,12 +114,17 @@ function Fit({ marks, uMarkMm }: { marks: readonly Mark[]; uMarkMm: number }) {
       </Body>
     );
   const { mmPerPx, uMmPerPx, scatterMm } = scale;
+  const line = lineOf(scale);
   return (
     <View className="gap-1" testID="scale-fit">
       <Body>
         {formatUncertain({ value: mmPerPx, u: uMmPerPx, unit: 'mm' })} for each px, that is ± {formatPercent(uMmPerPx / Math.abs(mmPerPx))}{' '}
         of every difference.
       </Body>
+      <Label testID="scale-line">
+        At column 0 {formatUncertain({ value: line.offset, u: line.uOffset, unit: 'mm' })}; covariance with the slope{' '}
+        {formatSignificant(line.covariance, 2)} mm²/px, correlation {formatSignificant(line.covariance / (line.uOffset * line.uSlope), 2)}.
+      </Label>
       <Label>
         {scatterMm === null
           ? 'Two marks lie on a line whatever they are: add a third to see whether the scale is straight.'

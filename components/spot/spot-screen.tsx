@@ -27,7 +27,7 @@ export function SpotScreen() {
       aside={
         <>
           <ReadingPanel page={page} />
-          <ScalePanel page={page} linePx={linePx} />
+          <ScalePanel page={page} rigId={rigId} linePx={linePx} />
           <TargetPanel page={page} rigId={rigId} />
         </>
       }

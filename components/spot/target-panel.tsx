@@ -1,5 +1,6 @@
+import { useQueryClient } from '@tanstack/react-query';
 import { useState } from 'react';
-import { useLabMutation, useLabQuery, useMay, wordsOf } from '@/components/api';
+import { labKey, useLab, useLabMutation, useLabQuery, useMay, wordsOf } from '@/components/api';
 import { Body, Button, Field, Label, Panel, ProblemNotice, Section, Select } from '@/components/ui';
 import { listDevices, makeDeviceToken } from '@/shared/contracts/devices';
 import { isToken } from '@/shared/spot/setting';
@@ -52,7 +53,12 @@ function MakeToken({ page, rigId }: { page: SpotPage; rigId: string }) {
   const mayManage = useMay('tokens.manage').ok;
   const [name, setName] = useState(page.setting.channel === '' ? 'light spot' : page.setting.channel);
   const rateHz = Math.max(1, Math.round(page.view.figures.rateHz));
-  const make = useLabMutation(makeDeviceToken, ({ data }) => page.change({ token: data.secret, channel: name.trim() }));
+  const { labId } = useLab();
+  const queries = useQueryClient();
+  const make = useLabMutation(makeDeviceToken, ({ data }) => {
+    page.change({ token: data.secret, channel: name.trim() });
+    void queries.invalidateQueries({ queryKey: labKey(labId, listDevices) });
+  });
   if (!mayManage) return <Body>An owner of the lab makes a device token for the reader; paste it here.</Body>;
   const body = {
     name: 'Light-spot reader',

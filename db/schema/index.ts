@@ -4,6 +4,7 @@ export * from './rigs';
 export * from './protocols';
 export * from './runs';
 export * from './data';
+export * from './calibrations';
 export * from './imports';
 export * from './work';
 export * from './schedules';

@@ -8,6 +8,7 @@ import { countSamples } from '../store/sample-summaries';
 import { stepNotesOf } from '../store/step-notes';
 import { isoOf } from './maker';
 import { ProblemError } from './problem-error';
+import { calibrationsOfRun } from './run-calibrations';
 import { windowOf } from './run-window';
 import { softwareVersion } from './software';
 import type { Services } from './services';
@@ -25,13 +26,17 @@ export function assertEnded(run: RunRecord): void {
 }
 
 /** Channels of a run that have samples within it, with their samples. */
-async function seriesOf(services: Services, run: RunRecord): Promise<ChannelSeries[]> {
+async function seriesOf(services: Services, run: RunRecord, knownAtUtcMs: number): Promise<ChannelSeries[]> {
   const window = windowOf(run, services);
   const series: ChannelSeries[] = [];
-  for (const channel of await channelsOfRun(services.database.db, run)) {
+  const channels = await channelsOfRun(services.database.db, run);
+  const calibrations = await calibrationsOfRun(services, run, { channels, knownAtUtcMs });
+  for (const channel of channels) {
     if ((await countSamples(services.database, { ...window, labId: run.labId, channelId: channel.id })) === 0) continue;
     const { name, quantity, unit, role } = channel;
-    series.push({ info: { name, quantity, unit, role }, ...(await services.samples.read(run.labId, channel.id, window)) });
+    const calibration = calibrations.get(channel.id);
+    const info = { name, quantity, unit, role, ...(calibration === undefined ? {} : { calibration }) };
+    series.push({ info, ...(await services.samples.read(run.labId, channel.id, window)) });
   }
   return series;
 }
@@ -58,14 +63,15 @@ async function notesOf(services: Services, { labId, id }: RunRecord): Promise<Pi
 }
 
 /**
- * Everything of an ended run, as the archive wants it. Exclusions are those in force at `exclusionsAtUtcMs`; without it
+ * Everything of an ended run, as the archive wants it. Exclusions and calibrations are those in force at `inForceAtUtcMs`; without it
  * those of the frozen evaluation, so that the archive gives its numbers again, or, where none is frozen, those of now.
  */
-export async function archiveInputOf(services: Services, run: RunRecord, exclusionsAtUtcMs?: number): Promise<BuildArchiveInput> {
+export async function archiveInputOf(services: Services, run: RunRecord, inForceAtUtcMs?: number): Promise<BuildArchiveInput> {
   const { db } = services.database;
   const { start } = run;
   const nowUtcMs = services.clock.utcMs();
   const frozen = await findFrozenEvaluation(db, run.labId, run.id);
+  const askedAtUtcMs = inForceAtUtcMs ?? frozen?.createdAt ?? nowUtcMs;
   return {
     run: {
       runId: run.id,
@@ -82,8 +88,8 @@ export async function archiveInputOf(services: Services, run: RunRecord, exclusi
     protocol: start.protocol,
     steps: await readSteps(db, { labId: run.labId, runId: run.id }),
     events: await readEvents(db, { labId: run.labId, runId: run.id }, { afterSeq: 0 }),
-    channels: await seriesOf(services, run),
-    ...(await exclusionsAt(services, run, exclusionsAtUtcMs ?? frozen?.createdAt ?? nowUtcMs)),
+    channels: await seriesOf(services, run, askedAtUtcMs),
+    ...(await exclusionsAt(services, run, askedAtUtcMs)),
     ...(await notesOf(services, run)),
     evaluation: frozenOf(frozen),
     createdAt: isoOf(nowUtcMs),

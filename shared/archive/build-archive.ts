@@ -181,11 +181,11 @@ function recordedFiles({
     jsonFile('protocol.json', protocol),
     csvFile(stepsFile, stepsCsv(steps), { name: 'steps', schema: stepsSchema }),
     ...channels.map((series) => {
-      const { name, quantity, unit, role } = series.info;
+      const { name, quantity, unit, role, calibration } = series.info;
       return csvFile(channelPath(name), channelCsv(series), {
         name: `channel-${name.toLowerCase().replaceAll(/[^a-z0-9._-]+/g, '-')}`,
         schema: channelSchema(series.info),
-        evenfall: { channel: name, quantity, unit, role },
+        evenfall: { channel: name, quantity, unit, role, ...(calibration === undefined ? {} : { calibration }) },
       });
     }),
   ];

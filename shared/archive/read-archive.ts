@@ -1,6 +1,7 @@
 import * as z from 'zod';
 import { protocolDocumentSchema, registeredEvaluationSchema, type ProtocolDocument } from '../protocol/document';
 import type { RigDocument } from '../rig/document';
+import { calibrated, calibrationFault } from '../statistics/calibration';
 import type { ArchiveFiles, ArchiveWarning, Sha256OfBytes } from './archive-types';
 import { readArchivedRig } from './archived-rig';
 import { channelPath, readChannel, type SampleColumns } from './channel-csv';
@@ -17,7 +18,7 @@ export interface ArchivedChannel extends Omit<ChannelInfo, 'role'> {
   role: string;
 }
 
-/** Samples of one channel: mid-exposure UTC ms and value in the channel's unit, in time order. */
+/** Samples of one channel: mid-exposure UTC ms and value in the channel's unit, calibrated where the archive has a calibration, in time order. */
 export interface ArchivedSeries extends SampleColumns {
   info: ArchivedChannel;
 }
@@ -74,9 +75,14 @@ export function readArchive(files: ArchiveFiles, sha256: Sha256OfBytes): Archive
           { file: 'datapackage.json' },
           `there is no channel "${name}"; the archive holds ${listOf(resources.map(({ info }) => info.name))}`,
         );
-      return { info: found.info, ...readChannel(found.path, requiredText(files, found.path)) };
+      return calibratedSeries({ info: found.info, ...readChannel(found.path, requiredText(files, found.path)) });
     },
   };
+}
+
+function calibratedSeries(series: ArchivedSeries): ArchivedSeries {
+  const { calibration } = series.info;
+  return calibration === undefined ? series : { ...series, value: series.value.map((reading) => calibrated(calibration, reading)) };
 }
 
 export const listOf = (names: readonly string[]) => (names.length === 0 ? 'none' : names.map((name) => `"${name}"`).join(', '));
@@ -127,6 +133,26 @@ const channelFactsSchema = z.looseObject({
   role: z.string().catch(''),
 });
 
+const calibrationSchema = z.strictObject({
+  revision: z.number().int().positive(),
+  offset: z.number(),
+  slope: z.number(),
+  uOffset: z.number().nonnegative(),
+  uSlope: z.number().nonnegative(),
+  covariance: z.number(),
+});
+
+/** What is there and cannot be read is no absent one: G would be another. */
+function calibrationIn({ path, evenfall }: ResourceDescriptor): Pick<ArchivedChannel, 'calibration'> {
+  const found = z.looseObject({ calibration: z.unknown() }).safeParse(evenfall ?? {});
+  if (!found.success || found.data.calibration === undefined) return {};
+  const parsed = calibrationSchema.safeParse(found.data.calibration);
+  const fault = parsed.success ? calibrationFault(parsed.data) : firstIssue(parsed.error);
+  if (!parsed.success || fault !== null)
+    throw new UnusableArchive({ file: 'datapackage.json' }, `the calibration of the resource ${path} cannot be used: ${fault ?? ''}`);
+  return { calibration: parsed.data };
+}
+
 function channelResources(descriptor: PackageDescriptor): { path: string; info: ArchivedChannel }[] {
   return descriptor.resources
     .filter(({ path }) => path.startsWith('channels/') && path.endsWith('.csv'))
@@ -143,5 +169,5 @@ function channelInfo(resource: ResourceDescriptor): ArchivedChannel {
     );
   const fileName = resource.path.slice('channels/'.length, -'.csv'.length);
   const name = channel !== undefined && channelPath(channel) === resource.path ? channel : fileName;
-  return { name, quantity, unit: unit ?? '', role };
+  return { name, quantity, unit: unit ?? '', role, ...calibrationIn(resource) };
 }

@@ -23,7 +23,7 @@ Run ${runId} of a torsion balance. ${found}
 | protocol.json | what was to be done, and how it was to be evaluated, decided before |
 | steps.csv | what was done: start and end of each step in UTC with u, turntable angles in degrees |
 | events.jsonl | the log as a chain: \`hash\` is the SHA-256 of the canonical JSON (RFC 8785) of a line without \`hash\`, \`prev\` that of the line before |
-| channels/*.csv | what was measured, in UTC |
+| channels/*.csv | what was read, in UTC; where datapackage.json has a \`calibration\` of the channel, the value is offset + slope · reading |
 | frames/ | what cameras saw at both ends of swings and at marks, listed in frames/frames.csv; where there are any |
 | exclusions.csv, notes.csv, evaluation.json | stretches left out, what was written to steps, the frozen evaluation; where there are any |
 

@@ -1,5 +1,6 @@
 import type { ProtocolDocument } from '../protocol/document';
 import type { RigDocument } from '../rig/document';
+import type { Calibration } from '../statistics/calibration';
 
 /** The records a run leaves, as the engine writes them, the database keeps them and the archive shows them. */
 
@@ -81,6 +82,13 @@ export interface ChannelInfo {
   quantity: string;
   unit: 'rad' | 'urad' | 'mrad' | 'm' | 'mm' | string;
   role: 'deflection' | 'environment' | 'turntable';
+  /** What its samples truly say; absent: they say it themselves. */
+  calibration?: ChannelCalibration;
+}
+
+/** A calibration in the channel's unit, and which revision of it. */
+export interface ChannelCalibration extends Calibration {
+  revision: number;
 }
 
 /** Samples of one channel, mid-exposure UTC ms and value in the channel's unit, in time order. */

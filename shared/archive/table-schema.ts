@@ -1,6 +1,7 @@
 import { exclusionColumns } from './exclusions';
 import { frameColumns } from './frames';
 import { noteColumns } from './notes';
+import type { ChannelInfo } from './run-records';
 import { addedStepColumns, stepColumns } from './step-csv';
 
 /** Frictionless Table Schemas of the archive's CSV files; units stand in the descriptions. */
@@ -50,11 +51,12 @@ export const stepsSchema: TableSchema = {
   primaryKey: 'seq',
 };
 
-export function channelSchema(info: { quantity: string; unit: string }): TableSchema {
+export function channelSchema(info: Pick<ChannelInfo, 'quantity' | 'unit' | 'calibration'>): TableSchema {
+  const calibrated = info.calibration === undefined ? '' : '; as read, before offset + slope · value of the resource’s calibration';
   return {
     fields: [
       { ...instant('time_utc', 'middle of the exposure'), constraints: { required: true } },
-      { name: 'value', type: 'number', description: `${info.quantity}; unit: ${info.unit}`, constraints: { required: true } },
+      { name: 'value', type: 'number', description: `${info.quantity}; unit: ${info.unit}${calibrated}`, constraints: { required: true } },
     ],
     primaryKey: 'time_utc',
   };

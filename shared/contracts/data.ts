@@ -1,4 +1,5 @@
 import * as z from 'zod';
+import { calibrationSchema } from './calibrations';
 import { idSchema, instantSchema } from './common';
 import { defineRoute } from './route';
 
@@ -197,6 +198,8 @@ export const readSamples = defineRoute({
     utcMs: z.array(z.number()),
     value: z.array(z.number()),
     total: z.number().int(),
+    /** By which the values were calibrated; null: they are as read. */
+    calibration: calibrationSchema.extend({ revision: z.number().int() }).nullable(),
     /** Stretches of the window of which summaries of 2 s alone are left. */
     thinned: z.array(z.strictObject({ fromUtcMs: z.number(), toUtcMs: z.number() })),
   }),

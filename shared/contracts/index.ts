@@ -1,6 +1,7 @@
 import * as alarms from './alarms';
 import * as audit from './audit';
 import * as brokers from './brokers';
+import * as calibrations from './calibrations';
 import * as calls from './calls';
 import * as cameras from './cameras';
 import * as data from './data';
@@ -45,6 +46,7 @@ export const routes: readonly RouteContract[] = [
   doors,
   data,
   importFiles,
+  calibrations,
   retention,
   devices,
   brokers,

@@ -1,4 +1,5 @@
 import type { Archive, ArchivedSeries } from '../archive/read-archive';
+import type { ChannelCalibration } from '../archive/run-records';
 import type { RingDownData } from '../statistics/ring-down';
 import { iterate } from './fit-rounds';
 import { ringDownStart, type RingDownStart } from '../statistics/ring-down-start';
@@ -25,6 +26,8 @@ export interface Analysis {
   /** Where the fit was begun; null where the data suggest nothing. */
   start: RingDownStart | null;
   scale: ChannelScale;
+  /** Of the channel; null where it has none. */
+  calibration: ChannelCalibration | null;
   /** Null without a segment. */
   found: DwellFit | null;
   measured: MeasuredOscillator;
@@ -103,7 +106,7 @@ function analyseAt(
     const held: MeasuredOscillator = { omega: omegaOf(whole.free.period), gamma: whole.free.gamma };
     return { measured: held, ...iterate({ archive, plan, measured: held, start: null, samples: beginnings, judge }, rough) };
   };
-  return { windows, samplesOf, measured, start, ...whole, begun };
+  return { windows, samplesOf, measured, start, calibration: series.info.calibration ?? null, ...whole, begun };
 }
 
 /** First guess of a spot scale's zero, m: midway between the mean readings of near and far. */

@@ -6,7 +6,7 @@ import type { Reversal } from './reversal';
 import { centreOf } from './ring-down-fit';
 
 /** Null where the analysis came to no G. */
-export function basisOf({ segments, found, measured, free, reversal, scale, solution }: Analysis): GBasis | null {
+export function basisOf({ segments, found, measured, free, reversal, scale, solution, calibration }: Analysis): GBasis | null {
   if (solution === null || reversal === null) return null;
   const ringDown = found?.ringDown ?? null;
   const valueOf = (known: Known | null) => (known === null ? null : { value: known.value });
@@ -35,6 +35,7 @@ export function basisOf({ segments, found, measured, free, reversal, scale, solu
     free: { ringDownShare: free.ringDownShare },
     reversal: { value: reversal.value, members: reversal.members },
     scale,
+    ...(calibration === null ? {} : { calibration: { slope: calibration.slope, uSlope: calibration.uSlope } }),
     known: {
       reversal: reversal.known === null ? null : stored(reversal.known),
       period: stored(free.period),

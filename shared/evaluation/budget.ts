@@ -25,7 +25,7 @@ export interface Correlation {
 }
 
 export interface ObservedTerm {
-  input: 'reversal_rad' | 'modulation_rad' | 'period_s' | 'decayTime_s';
+  input: 'reversal_rad' | 'modulation_rad' | 'period_s' | 'decayTime_s' | 'calibration.slope';
   known: Known;
   sensitivity: number;
 }

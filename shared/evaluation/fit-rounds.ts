@@ -35,7 +35,7 @@ export interface FitQuestion {
   judge: boolean;
 }
 
-export type FitOutcome = Omit<Analysis, 'windows' | 'samplesOf' | 'measured' | 'clockOffset' | 'start' | 'byBeginnings'>;
+export type FitOutcome = Omit<Analysis, 'windows' | 'samplesOf' | 'measured' | 'clockOffset' | 'start' | 'calibration' | 'byBeginnings'>;
 
 /** What one round of fitting takes from the round before. */
 interface Round {

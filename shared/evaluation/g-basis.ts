@@ -42,6 +42,8 @@ export const gBasisSchema = z.strictObject({
     z.strictObject({ kind: z.literal('angle'), radPerUnit: z.number() }),
     z.strictObject({ kind: z.literal('spot'), metresPerUnit: z.number(), lever: leverSchema, zeroGiven: z.boolean() }),
   ]),
+  /** Slope of the channel's calibration, by which the readings were multiplied already; absent where there is none. */
+  calibration: z.strictObject({ slope: z.number(), uSlope: z.number() }).optional(),
   /** `reversal` null: too few dwells to judge their scatter by, so there is no budget. */
   known: z.strictObject({ reversal: knownSchema.nullable(), period: knownSchema, decayTime: knownSchema.nullable() }),
   /** Correlation coefficients of what the same dwells tell; absent in evaluations of older versions, and where nothing rang. */

@@ -60,7 +60,7 @@ export function supposedG(documented: RigDocument, basis: GBasis, supposed: Supp
     gOf: (other) => gOf({ rig: other }),
     stations: stations.filter((key) => key !== null),
     lever: basis.scale.kind === 'spot',
-    observed: observedTerms(gOf, { reversal, period, decayTime }),
+    observed: [...observedTerms(gOf, { reversal, period, decayTime }), ...calibrationTerm(basis.calibration, gOf)],
     axisOffset: axisOffsetOf(rig),
     correlations: correlationsOf(basis),
   });
@@ -105,7 +105,7 @@ export function periodBudget(rig: RigDocument, outcome: PeriodOutcome, segments:
 }
 
 /** The budget of G by modulation: what the turns leave open stands in the line of the amplitude. Null with fewer than two turns. */
-export function modulationBudget(rig: RigDocument, outcome: ModulationOutcome, { free, scale }: Analysis): Budget | null {
+export function modulationBudget(rig: RigDocument, outcome: ModulationOutcome, { free, scale, calibration }: Analysis): Budget | null {
   const { solution, statistical, amplitudeRad, gOf } = outcome;
   if (statistical === null) return null;
   const { period, decayTime } = free;
@@ -128,6 +128,12 @@ export function modulationBudget(rig: RigDocument, outcome: ModulationOutcome, {
       input: 'decayTime_s',
       known: decayTime,
       sensitivity: derivative((step) => gOf({ periodS: period.value, decayTimeS: decayTime.value + step }), relativeStep * decayTime.value),
+    });
+  if (calibration !== null)
+    observed.push({
+      input: 'calibration.slope',
+      known: { value: calibration.slope, u: calibration.uSlope, nu: Infinity },
+      sensitivity: solution.bigG / calibration.slope,
     });
   const lever = scale.kind === 'spot';
   return budgetOf({ rig, bigG: solution.bigG, gOf: (supposed) => gOf({ rig: supposed }), stations: [], lever, observed, axisOffset: null });
@@ -152,22 +158,35 @@ function observedTerms(gOf: GOf, known: { reversal: Known; period: Known; decayT
   return [...terms, { input: 'decayTime_s', known: decayTime, sensitivity: byDecay }];
 }
 
+/** The slope of the channel's calibration stretches every difference alike; its offset drops out of near minus far. */
+function calibrationTerm(calibration: GBasis['calibration'], gOf: GOf): ObservedTerm[] {
+  if (calibration === undefined) return [];
+  const { slope, uSlope } = calibration;
+  const sensitivity = derivative((step) => gOf({ stretch: 1 + step / slope }), relativeStep * Math.abs(slope));
+  return [{ input: 'calibration.slope', known: { value: slope, u: uSlope, nu: Infinity }, sensitivity }];
+}
+
 /** What G is computed from; each key left out stays as it is supposed anyway. */
 interface Changes {
   rig?: RigDocument;
   reversalRad?: number;
   periodS?: number;
   decayTimeS?: number;
+  /** By how much more every reading changes than was read. */
+  stretch?: number;
 }
 type GOf = (changes: Changes) => number;
 
 /** G of the same observations for a rig, a difference or a pendulum other than those supposed anyway. */
 function gFunction(documented: RigDocument, { scale, segments, found, measured, free, reversal, bigG }: GBasis, anyway: Changes): GOf {
   return (changes) => {
-    const { rig = documented, reversalRad, periodS, decayTimeS } = { ...anyway, ...changes };
-    const lever = leverOf(rig);
+    const { rig = documented, reversalRad, periodS, decayTimeS, stretch = 1 } = { ...anyway, ...changes };
+    const given = leverOf(rig);
+    // A spot that moves more is one that is nearer.
+    const lever = given === null ? null : { ...given, distanceM: given.distanceM / stretch };
     const rereadRad = () =>
       reversal.members.reduce((sum, { segment, weight }) => sum + weight * reread(scale, segments[segment]?.centreRad ?? 0, lever), 0);
+    const readRad = () => (scale.kind === 'angle' ? stretch * reversal.value : rereadRad());
     const system = gSystem({
       rig,
       stationsOf: documented,
@@ -176,7 +195,7 @@ function gFunction(documented: RigDocument, { scale, segments, found, measured, 
       measured,
       free,
       reversal,
-      reversalRad: reversalRad ?? (scale.kind === 'angle' ? reversal.value : rereadRad()),
+      reversalRad: reversalRad === undefined ? readRad() : stretch * reversalRad,
       ...(periodS === undefined || decayTimeS === undefined ? {} : { oscillator: { periodS, decayTimeS } }),
     });
     if (system === null) throw new NoSolutionError('there is no source on the turntable');

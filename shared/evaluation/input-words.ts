@@ -17,6 +17,7 @@ const inWords: Record<string, string> = {
   'pendulum.extraInertia': 'extra inertia',
   'lever.distance': 'mirror to scale',
   'lever.zero': 'zero of the scale',
+  'calibration.slope': 'calibration of the channel, slope',
   'axis.offset': 'turntable axis to fibre',
   'stations.near': 'angle of near',
   'stations.far': 'angle of far',

@@ -41,3 +41,9 @@ export function formatReading(value: number, unit: string): string {
   if (unit === 'rad') return formatDeflection(value);
   return withUnit(formatSignificant(value, 4, { signed: ofPlace.has(unit) }), unit);
 }
+
+/** A reading whose standard uncertainty is known; without one as `formatReading`. */
+export function formatKnownReading({ value, u }: { value: number; u: number | null }, unit: string): string {
+  if (u === null) return formatReading(value, unit);
+  return unit === 'rad' ? formatDeflectionUncertain({ value, u }, { signed: true }) : formatUncertain({ value, u, unit });
+}

@@ -1,3 +1,5 @@
+import type { Calibration } from '../statistics/calibration';
+
 /** The scale in the picture: which column shows which millimetre. */
 
 export interface Mark {
@@ -46,3 +48,20 @@ export const mmAt = (scale: SpotScale, px: number): number => scale.meanMm + sca
 /** Standard uncertainty of that reading, mm, for a column that is known to `uPx`. */
 export const uMmAt = (scale: SpotScale, px: number, uPx: number): number =>
   Math.hypot(scale.uMeanMm, (px - scale.meanPx) * scale.uMmPerPx, scale.mmPerPx * uPx);
+
+/** The same scale as a line through column 0: mm = offset + slope · px. */
+export function lineOf({ meanPx, meanMm, mmPerPx, uMeanMm, uMmPerPx }: SpotScale): Calibration {
+  return {
+    offset: meanMm - mmPerPx * meanPx,
+    slope: mmPerPx,
+    uOffset: Math.hypot(uMeanMm, meanPx * uMmPerPx),
+    uSlope: uMmPerPx,
+    covariance: -meanPx * uMmPerPx * uMmPerPx,
+  };
+}
+
+/** What the scale leaves open of readings that are in its mm already: they stay as they are, with its u. */
+export function calibrationOf({ meanMm, mmPerPx, uMeanMm, uMmPerPx }: SpotScale): Calibration {
+  const uSlope = uMmPerPx / Math.abs(mmPerPx);
+  return { offset: 0, slope: 1, uOffset: Math.hypot(uMeanMm, meanMm * uSlope), uSlope, covariance: -meanMm * uSlope * uSlope };
+}

@@ -83,6 +83,14 @@ chapter('a token is made here, and samples flow into the channel', async () => {
   await hand.taps('end-reading');
 });
 
+chapter('the channel keeps what the marks leave open', async () => {
+  await hand.reads('scale-line', /At column 0 10\.00\(24\) mm; covariance with the slope .* mm²\/px, correlation −0\.80/);
+  await hand.taps('keep-scale');
+  await hand.reads('scale-kept', 'light spot keeps this u as revision 1 of its calibration.');
+  await hand.at('scale-kept').scrollIntoViewIfNeeded();
+  await hand.shoots('light-spot-scale');
+});
+
 chapter('every sample is where the spot was, to 0.05 px rms', async () => {
   const errors = (await heard()).map(({ px }) => px - nearest(px));
   const rms = Math.sqrt(errors.reduce((sum, error) => sum + error * error, 0) / errors.length);
@@ -143,3 +151,47 @@ async function heard(): Promise<{ utcMs: number; px: number }[]> {
 }
 
 const nearest = (px: number) => levelsOf().reduce((best, level) => (Math.abs(level - px) < Math.abs(best - px) ? level : best));
+
+chapter('at the rig a channel is calibrated by comparison, by keys alone, and by the figures of a certificate', async () => {
+  await hand.goes(`/rigs/${demoIds.rig}`, 'channel-calibrations');
+  await hand.reads(
+    'channel-calibrations',
+    /light spot, revision 1: .* \+ 1\.0000\(\d+\) · reading, correlation.*Scale of the light spot, 2 marks/,
+  );
+  await hand.tabsTo('add-calibration');
+  await hand.page.keyboard.press('Enter');
+  await hand.at('calibration-sheet').waitFor();
+  await hand.at('calibration-channel').selectOption({ label: 'light spot' });
+  const points = [
+    ['1: it read', '10'],
+    ['the standard said', '10.02'],
+    ['2: it read', '60'],
+    ['the standard said', '60.12'],
+  ] as const;
+  for (const [index, [label, text]] of points.entries()) {
+    await hand.page
+      .getByLabel(label)
+      .nth(label.startsWith('the') ? (index - 1) / 2 : 0)
+      .focus();
+    await hand.page.keyboard.type(text);
+  }
+  expect(await hand.isEnabled('calibration-save')).toBe(false);
+  await hand.types('calibration-u', '0,03');
+  await hand.reads('calibration-line', /Value = 0\.000\(36\) mm \+ 1\.002 00\(85\) · reading, correlation −0\.81/);
+  await hand.types('calibration-note', 'Against the gauge blocks');
+  await hand.shoots('calibration-sheet');
+  await hand.at('calibration-save').focus();
+  await hand.page.keyboard.press('Enter');
+  await hand.reads('channel-calibrations', /light spot, revision 2: 0\.000\(36\) mm \+ 1\.002 00\(85\) · reading/);
+  await hand.taps('add-calibration');
+  await hand.taps(hand.page.getByRole('tab', { name: 'By its figures' }));
+  await hand.types('calibration-uOffset', '0.1');
+  await hand.types('calibration-uSlope', '0.01');
+  await hand.types('calibration-covariance', '5');
+  await hand.types('calibration-note', 'Certificate');
+  await hand.taps('calibration-save');
+  await hand.sees(/their correlation would be beyond 1/);
+  await hand.types('calibration-covariance', '0');
+  await hand.page.getByText('Nothing was changed').waitFor({ state: 'detached' });
+  await hand.shoots('calibration-figures');
+});

@@ -1,5 +1,6 @@
 import * as contracts from '@/shared/contracts/data';
 import type { ChannelView } from '@/shared/contracts/data';
+import { calibrated } from '@/shared/statistics/calibration';
 import { storeImport, tryImport, type StoredSum } from '@/server/store/import-commit';
 import type { ImportRecord } from '@/server/store/import-files';
 import * as store from '@/server/store/imports';
@@ -14,6 +15,7 @@ import { refusalOf, wantedChannel } from '../import-refusals';
 import { assertMapping, checkViewOf, readImport, type ImportReading } from '../import-steps';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
+import { calibrationsOfRun } from '../run-calibrations';
 import { windowOf } from '../run-window';
 import type { Services } from '../services';
 
@@ -125,22 +127,27 @@ export const dataRoutes = [
     if (window.toUtcMs < window.fromUtcMs)
       throw new ProblemError('invalid-input', 'The window ends before it begins.', [{ path: 'toUtcMs', message: 'not before fromUtcMs' }]);
     const { channel, total } = await chooseChannel(services, { run, channels, window }, query.channelId);
-    const view = { channel: channel === null ? null : channelViewOf(channel), channels: channels.map(channelViewOf), total };
-    if (channel === null) return { ...view, utcMs: [], value: [], thinned: [] };
+    const known = { channel: channel === null ? null : channelViewOf(channel), channels: channels.map(channelViewOf), total };
+    if (channel === null) return { ...known, utcMs: [], value: [], thinned: [], calibration: null };
+    const inForce = await calibrationsOfRun(services, run, { channels: [channel], knownAtUtcMs: services.clock.utcMs() });
+    const calibration = inForce.get(channel.id) ?? null;
+    const view = { ...known, calibration };
     const gone = await thinnedWithin(services.database.db, { ...window, labId: run.labId, channelId: channel.id });
     const thinned = gone.map(({ fromUtcMs, toUtcMs }) => ({ fromUtcMs, toUtcMs }));
-    if (total > query.points || thinned.length > 0)
-      return {
-        ...view,
-        thinned,
-        ...(await extremesOf(
-          services.database,
-          { ...window, labId: run.labId, channelId: channel.id },
-          { cells: Math.floor(query.points / 2), total },
-        )),
-      };
-    const batch = await services.samples.read(run.labId, channel.id, window);
-    return { ...view, thinned, utcMs: [...batch.utcMs], value: [...batch.value] };
+    const { utcMs, value } =
+      total > query.points || thinned.length > 0
+        ? await extremesOf(
+            services.database,
+            { ...window, labId: run.labId, channelId: channel.id },
+            { cells: Math.floor(query.points / 2), total },
+          )
+        : await services.samples.read(run.labId, channel.id, window);
+    return {
+      ...view,
+      thinned,
+      utcMs: [...utcMs],
+      value: Array.from(value, (one) => (calibration === null ? one : calibrated(calibration, one))),
+    };
   }),
 ];
 

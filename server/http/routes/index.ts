@@ -3,6 +3,7 @@ import { alarmRoutes } from './alarms';
 import { armingRoutes } from './arming';
 import { auditRoutes } from './audit';
 import { brokerRoutes } from './brokers';
+import { calibrationRoutes } from './calibrations';
 import { callRoutes } from './calls';
 import { cameraRoutes } from './cameras';
 import { dataRoutes } from './data';
@@ -41,6 +42,7 @@ export const allRoutes: readonly MountedRoute[] = [
   ...doorRoutes,
   ...importFileRoutes,
   ...dataRoutes,
+  ...calibrationRoutes,
   ...sampleExportRoutes,
   ...retentionRoutes,
   ...deviceRoutes,

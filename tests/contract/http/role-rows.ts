@@ -211,6 +211,12 @@ export const rows: Readonly<Record<string, Row>> = {
     allowed: 404,
   },
   removeBroker: { params: (things) => ({ ...rig(things), brokerId: nobody }), allowed: 404 },
+  listCalibrations: { params: rig, allowed: 200 },
+  addCalibration: {
+    params: rig,
+    body: () => ({ channelId: nobody, calibration: { offset: 0, slope: 1, uOffset: 0, uSlope: 0.001, covariance: 0 }, note: 'x' }),
+    allowed: 404,
+  },
   listCameras: { params: rig, allowed: 200 },
   addCamera: {
     params: rig,
