@@ -108,8 +108,8 @@ chapter('the network is cut and the page breaks down: another page sends what wa
   await hand.reads('spot-trouble', /wait on this device and are sent again; it holds 432 000 of them/);
   await hand.shoots('light-spot-offline');
   const waited = await waiting();
-  const cutAt = Date.now();
   await hand.page.close();
+  const cutAt = lab().server.clock.utcMs() + 500;
   await hand.context.setOffline(false);
   hand.browser.page = await hand.context.newPage();
   await hand.goes(page, 'spot-screen');
@@ -184,7 +184,7 @@ chapter('at the rig a channel is calibrated by comparison, by keys alone, and by
   await hand.page.keyboard.press('Enter');
   await hand.reads('channel-calibrations', /light spot, revision 2: 0\.000\(36\) mm \+ 1\.002 00\(85\) · reading/);
   await hand.taps('add-calibration');
-  await hand.taps(hand.page.getByRole('tab', { name: 'By its figures' }));
+  await hand.tapsOn('By its figures', 'radio');
   await hand.types('calibration-uOffset', '0.1');
   await hand.types('calibration-uSlope', '0.01');
   await hand.types('calibration-covariance', '5');
