@@ -21,8 +21,8 @@ const micro = (rad: number) => rad * 1e6;
 
 const spanOf = (values: readonly number[]): [number, number] => [Math.min(...values) - room, Math.max(...values) + room];
 
-/** Allan deviation over averaging time, both logarithmic, with ± u, and the line that white noise would follow. */
-export function AllanPlot({ points, words }: { points: readonly ResidualAllanPoint[]; words: string }) {
+/** A deviation of Allan's family, by its name, over averaging time, both logarithmic, with ± u, and the line that white noise would follow. */
+export function AllanPlot({ points, words, name }: { points: readonly ResidualAllanPoint[]; words: string; name: string }) {
   const { colors } = useTheme();
   const { width, onLayout } = useWidth(320);
   const box = { left, top, width: width - left - 10, height: plotPx };
@@ -47,7 +47,7 @@ export function AllanPlot({ points, words }: { points: readonly ResidualAllanPoi
             box={box}
             scale={scale}
             colors={colors}
-            yUnit="Allan deviation, µrad"
+            yUnit={`${name}, µrad`}
             xUnit="averaging time, s"
             at={{ x: logTicks(...scale.x), y: logTicks(...scale.y) }}
             formatX={plain}
@@ -70,7 +70,7 @@ export function AllanPlot({ points, words }: { points: readonly ResidualAllanPoi
       </View>
       <HiddenTable
         caption={words}
-        columns={['Averaging time', 'Allan deviation with u', 'White noise would have']}
+        columns={['Averaging time', `${name} with u`, 'White noise would have']}
         rows={points.map(({ tauS, deviationRad, u, whiteRad }) => [
           formatDuration(tauS),
           formatUncertain({ value: micro(deviationRad), u: micro(u), unit: 'µrad' }),

@@ -30,5 +30,10 @@ export function pretendOf({ segments, found }: Analysis): PretendResult | null {
     series.map((one) => one.value),
     tauS,
   );
-  return { value, u, count: series.length - 1, allan: allan.map(({ tau_s, deviation }) => ({ tau_s, deviation_rad: deviation })) };
+  return {
+    value,
+    u,
+    count: series.length - 1,
+    allan: allan.map(({ tau_s, deviation, u: uOf }) => ({ tau_s, deviation_rad: deviation, u: uOf })),
+  };
 }

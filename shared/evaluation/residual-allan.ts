@@ -1,9 +1,9 @@
-import { allanSums } from '../statistics/allan';
+import { deviationSums, whiteVariance, type DeviationKind } from '../statistics/allan';
 import type { FitCurve } from './result';
 
 export interface ResidualAllanPoint {
   tauS: number;
-  /** Overlapping Allan deviation with its standard uncertainty, rad. */
+  /** Deviation with its standard uncertainty, rad. */
   deviationRad: number;
   u: number;
   /** What white noise as great as at the shortest time would have here, rad. */
@@ -16,36 +16,29 @@ const gapFactor = 1.5;
 const fewest = 4;
 
 /**
- * Overlapping Allan deviation (NIST SP 1065, 5.2.4) of what the fits leave of the data, the squares of all dwells pooled; averaging times of 1, 2, 4, …
- * bins. Its u is that of white noise with the degrees of freedom of the same text, table 5. A fit takes slow parts out, so at
- * a good part of a dwell's length the deviation lies below that of the readings.
+ * Deviation (NIST SP 1065, 5.2) of what the fits leave of the data, the squares of all dwells pooled; averaging times of 1, 2, 4, … bins. Its u is that
+ * of white noise. A fit takes slow parts out, so at a good part of a dwell's length the deviation lies below that of the readings.
  */
-export function residualAllan(curves: readonly FitCurve[]): ResidualAllanPoint[] {
+export function residualAllan(curves: readonly FitCurve[], kind: DeviationKind = 'allan'): ResidualAllanPoint[] {
   const widthS = usualStep(curves);
   const series = widthS === null ? [] : curves.flatMap((curve) => unbroken(curve, widthS));
   const longest = Math.max(0, ...series.map(({ length }) => length));
   const points: ResidualAllanPoint[] = [];
   for (let m = 1; 2 * m < longest; m *= 2) {
-    const sums = series.map((values) => allanSums(values, m)).filter(({ count }) => count > 0);
+    const sums = series.filter(({ length }) => length >= 2 * m).map((values) => deviationSums(values, m, kind));
     const count = sums.reduce((all, one) => all + one.count, 0);
     if (count < fewest) break;
-    const deviationRad = Math.sqrt(sums.reduce((all, { sum }) => all + sum, 0) / (2 * m * m * count));
-    const freedom = series.reduce((all, { length }) => all + whiteFreedom(length + 1, m), 0);
+    const deviationRad = Math.sqrt(sums.reduce((all, { sum }) => all + sum, 0) / count);
+    const freedom = sums.reduce((all, one) => all + one.freedom, 0);
     const first = points[0]?.deviationRad ?? deviationRad;
     points.push({
       tauS: m * (widthS ?? 0),
       deviationRad,
       u: deviationRad / Math.sqrt(2 * Math.max(1, freedom)),
-      whiteRad: first / Math.sqrt(m),
+      whiteRad: first * Math.sqrt(whiteVariance(m, kind) / whiteVariance(1, kind)),
     });
   }
   return points;
-}
-
-/** Equivalent degrees of freedom of `phases` = averages + 1 with white noise (NIST SP 1065, table 5, white frequency noise). */
-function whiteFreedom(phases: number, m: number): number {
-  if (phases <= 2 * m) return 0;
-  return ((3 * (phases - 1)) / (2 * m) - (2 * (phases - 2)) / phases) * ((4 * m * m) / (4 * m * m + 5));
 }
 
 function usualStep(curves: readonly FitCurve[]): number | null {

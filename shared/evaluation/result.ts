@@ -19,7 +19,7 @@ const pretendResultSchema = z.strictObject({
   value: z.number(),
   u: z.number().nullable(),
   count: z.number().int(),
-  allan: z.array(z.strictObject({ tau_s: z.number(), deviation_rad: z.number() })),
+  allan: z.array(z.strictObject({ tau_s: z.number(), deviation_rad: z.number(), u: z.number().optional() })),
 });
 export type PretendResult = z.infer<typeof pretendResultSchema>;
 

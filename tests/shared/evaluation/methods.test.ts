@@ -1,8 +1,7 @@
-import { allanDeviation, allanDeviations } from '@/shared/statistics/allan';
 import { walkFit } from '@/shared/statistics/gls-drift';
 import { relativeDifference } from '../../support/check-data';
 import { evaluateNight } from '../../support/evaluate-night';
-import { normalDeviates, sp1065Uniforms } from '../../support/lcg';
+import { normalDeviates } from '../../support/lcg';
 import { alternatingAngles, type NightPlan } from '../../support/night';
 import { closeRig, closeSourceAngleRad, wideRig, wideSourceAngleRad, withRig } from '../../support/reference-rigs';
 
@@ -153,26 +152,4 @@ describe('a still night', () => {
   test('of two dwells pretends nothing', () => {
     expect(withoutSwings({ ...still(() => 1e-4), anglesDeg: [near, near, near] }).pretend).toBeNull();
   });
-});
-
-test.each([
-  [1, 2.922319e-1],
-  [10, 9.159953e-2],
-  [100, 3.241343e-2],
-])('the overlapping Allan deviation of the 1000 points of SP 1065 over %d', (m, expected) => {
-  expect(relativeDifference(allanDeviation(sp1065Uniforms(1000), m), expected)).toBeLessThan(3e-7);
-});
-
-// The nine numbers of the small test set NBS-14, as quoted by public test suites.
-test.each([
-  [1, 91.22944974],
-  [2, 85.95286984],
-])('the overlapping Allan deviation of NBS-14 over %d', (m, expected) => {
-  expect(relativeDifference(allanDeviation([892, 809, 823, 798, 671, 644, 883, 903, 677], m), expected)).toBeLessThan(1e-9);
-});
-
-test('the Allan deviation of a straight drift is D m/√2', () => {
-  const drift = Array.from({ length: 64 }, (_, k) => 1e-3 * k);
-  expect(allanDeviation(drift, 10)).toBeCloseTo(7.0710678118655e-3, 14);
-  expect(allanDeviations(drift, 30).map(({ tau_s }) => tau_s)).toEqual([30, 60, 120, 240, 480]);
 });

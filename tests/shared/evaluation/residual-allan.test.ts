@@ -54,7 +54,7 @@ test.each([
   const tS = Array.from({ length }, (_, k) => widthS * k);
   const curve = { seq: 1, station: 'near', startUtcMs: 0, tS, modelRad: tS.map(() => 0), dataRad: tS.map(() => normal()) };
   const { deviationRad, u } = residualAllan([curve]).find(({ tauS }) => tauS === m * widthS) ?? { deviationRad: NaN, u: NaN };
-  expect(Math.abs((deviationRad / u) ** 2 / 2 / freedom - 1)).toBeLessThan(0.02);
+  expect(Math.abs((deviationRad / u) ** 2 / 2 / freedom - 1)).toBeLessThan(1e-5);
 });
 
 test('too little for a slope says nothing', () => {

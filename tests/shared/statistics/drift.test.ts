@@ -41,6 +41,50 @@ describe('the cost of removing drift', () => {
   });
 });
 
+describe('windows of p + 2 dwells, which just determine a drift of order p', () => {
+  /** Weights of half the difference. */
+  const windowOf = (order: number) => polynomialDifference(alternating(zeros(order + 2)), order).weights.map((w) => w / 2);
+
+  test.each([
+    [0, [1, -1], 0.5],
+    [1, [1, -2, 1], 0.375],
+    [2, [1, -3, 3, -1], 0.3125],
+    [3, [1, -4, 6, -4, 1], 0.2734375],
+    [4, [1, -5, 10, -10, 5, -1], 0.24609375],
+  ])('weigh by the binomial coefficients, p = %d (D1)', (order, binomial, variance) => {
+    const weights = windowOf(order);
+    weights.forEach((w, k) => expect(w).toBeCloseTo((binomial[k] as number) / 2 ** (order + 1), 11));
+    expect(weights.reduce((sum, w) => sum + w * w, 0)).toBeCloseTo(variance, 11);
+  });
+
+  // Mean of all windows of orders 2 and 3.
+  test.each([
+    [4, 1.25, null],
+    [5, 1.3671875, 1.3671875],
+    [6, 1.375, 1.4765625],
+    [8, 1.3, 1.453125],
+    [10, 1.237244897959, 1.362847222222],
+    [16, 1.142011834, 1.211805556],
+    [30, 1.072530864, 1.105306953],
+    [48, 1.044444444, 1.063791322],
+  ])('cost the published amount, averaged over %d dwells (D2)', (n, second, third) => {
+    for (const [order, published] of [
+      [2, second],
+      [3, third],
+    ] as const) {
+      if (published === null) continue;
+      const windows = n - order - 1;
+      const weights = zeros(n);
+      for (let first = 0; first < windows; first += 1) {
+        polynomialDifference(alternating(zeros(n)).slice(first, first + order + 2), order).weights.forEach((w, k) => {
+          weights[first + k] = (weights[first + k] as number) + w / windows;
+        });
+      }
+      expect(relativeDifference(costOf(weights), published)).toBeLessThan(1e-9);
+    }
+  });
+});
+
 describe('the difference of near and far', () => {
   const example = alternating([1.213, -1.187, 1.234, -1.168, 1.259, -1.141, 1.287, -1.115]);
 

@@ -1,6 +1,6 @@
 import { derivative } from '@/shared/evaluation/budget';
 import { studentTQuantile } from '@/shared/statistics/student-t';
-import { bilinear } from '@/shared/statistics/symmetric';
+import { at, bilinear } from '@/shared/statistics/symmetric';
 import { effectiveDegreesOfFreedom } from '@/shared/statistics/weighted-mean';
 import { relativeDifference } from '../../support/check-data';
 
@@ -45,6 +45,8 @@ describe('H.1, an end gauge', () => {
     const expected = [25, 9.68194, 2.8867873, 16.599027, 0, 0];
     contributions.forEach(({ contribution }, k) => expect(Math.abs(contribution)).toBeCloseTo(expected[k] as number, 5));
     expect(relativeDifference(u, 31.66387911101)).toBeLessThan(1e-8);
+    expect(relativeDifference(u * u, 1002.60124)).toBeLessThan(1e-8);
+    expect(relativeDifference(known.find(({ name }) => name === 'theta')?.u ?? NaN, 0.4062019202)).toBeLessThan(1e-9);
     expect(length(inputs)).toBe(50_000_838);
   });
 
@@ -52,6 +54,7 @@ describe('H.1, an end gauge', () => {
     const nu = effectiveDegreesOfFreedom(contributions);
     expect(relativeDifference(nu, 16.75185574)).toBeLessThan(1e-7);
     expect(relativeDifference(studentTQuantile(0.995, Math.floor(nu)) * u, 92.483276)).toBeLessThan(1e-7);
+    expect(relativeDifference(studentTQuantile(0.975, Math.floor(nu)) * u, 67.124425)).toBeLessThan(1e-7);
   });
 
   test('the second order, where the first vanishes, makes it 34 nm', () => {
@@ -107,15 +110,34 @@ describe('H.2, resistance, reactance and impedance measured together', () => {
 
   test('the observations have the published u and correlation', () => {
     expect(relativeDifference(Math.sqrt(covariance[0]?.[0] ?? NaN), 0.003209361307176)).toBeLessThan(1e-10);
-    const r = (covariance[0]?.[2] ?? NaN) / Math.sqrt((covariance[0]?.[0] ?? NaN) * (covariance[2]?.[2] ?? NaN));
-    expect(relativeDifference(r, 0.85762421084)).toBeLessThan(1e-9);
+    expect(relativeDifference(Math.sqrt(covariance[1]?.[1] ?? NaN), 9.471008394041e-6)).toBeLessThan(1e-10);
+    expect(relativeDifference(Math.sqrt(covariance[2]?.[2] ?? NaN), 7.520638270785e-4)).toBeLessThan(1e-10);
+    for (const [i, j, published] of [
+      [0, 1, -0.3553112198175],
+      [0, 2, 0.85762421084],
+      [1, 2, -0.6451112176892],
+    ] as const)
+      expect(relativeDifference(at(covariance, i, j) / Math.sqrt(at(covariance, i, i) * at(covariance, j, j)), published)).toBeLessThan(
+        1e-9,
+      );
   });
 
+  // Published: −0.588, −0.485, 0.993.
   test.each([
-    ['R', 'X', -0.588],
-    ['R', 'Z', -0.485],
-    ['X', 'Z', 0.993],
+    ['R', 'X', -0.5884297844236],
+    ['R', 'Z', -0.48525922421],
+    ['X', 'Z', 0.992511648949],
   ])('%s and %s are correlated by %p', (a, b, expected) => {
-    expect(bilinear(gradient(a), covariance, gradient(b)) / (uOf(a) * uOf(b))).toBeCloseTo(expected, 3);
+    expect(relativeDifference(bilinear(gradient(a), covariance, gradient(b)) / (uOf(a) * uOf(b)), expected)).toBeLessThan(1e-7);
+  });
+
+  // Published as 127.732, 219.847 and 254.260 ohm too.
+  test.each([
+    ['R', 127.7316304828],
+    ['X', 219.8468946033],
+    ['Z', 254.2600495867],
+  ])('%s by the second approach, each row by itself: %p ohm', (name, value) => {
+    const rows = [0, 1, 2, 3, 4].map((k) => (models[name] as (typeof models)[string])(series.map((one) => one[k] as number)));
+    expect(relativeDifference(mean(rows), value)).toBeLessThan(1e-11);
   });
 });

@@ -2,6 +2,7 @@ import { seededStreams, type GaussianSource } from '@/shared/physics/seeded-gaus
 import { summarised } from '@/shared/evaluation/monte-carlo';
 import { drawn, type Law } from '@/shared/statistics/draws';
 import { equivalence } from '@/shared/statistics/equivalence';
+import { studentTQuantile } from '@/shared/statistics/student-t';
 import { relativeDifference } from '../../support/check-data';
 
 /** Worked examples of JCGM 101:2008, 9 (expected values exact where a formula is given), and the test of equivalence of physics.md L1. */
@@ -52,7 +53,15 @@ test.each([5, 12.5])('a mean from few repetitions has the spread √(ν/(ν − 
 });
 
 test('a null that is shown and one that is merely not significant', () => {
-  const data = { value: 0.02416666666667, u: 0.02882702681075, nu: 11 };
+  const values = [0.12, -0.08, 0.05, 0.21, -0.15, 0.02, -0.04, 0.09, 0.11, -0.06, 0.03, -0.01];
+  const mean = values.reduce((sum, value) => sum + value, 0) / 12;
+  const data = { value: mean, u: Math.sqrt(values.reduce((sum, value) => sum + (value - mean) ** 2, 0) / 11 / 12), nu: 11 };
+  expect(relativeDifference(data.u, 0.02882702681075)).toBeLessThan(1e-11);
+  // The 90 % interval, and the bound at which the null is just shown is its further end.
+  const half = studentTQuantile(0.95, 11) * data.u;
+  expect(relativeDifference(mean - half, -0.02760335315113)).toBeLessThan(1e-9);
+  expect(relativeDifference(mean + half, 0.07593668648446)).toBeLessThan(1e-9);
+  expect([0.0759, 0.076].map((bound) => equivalence(data, bound).equivalent)).toEqual([false, true]);
   const shown = equivalence(data, 0.15);
   expect(relativeDifference(shown.p, 0.0005633291568629)).toBeLessThan(1e-9);
   expect(shown.equivalent).toBe(true);
