@@ -1,5 +1,6 @@
 import type { ChainedEvent } from '@/shared/archive/run-records';
 import type { LiveMessages, RunView, StepRowView } from '@/shared/contracts/runs';
+import { isOver } from './run-words';
 
 /** What the page knows of a running run, as a pure function of what arrived and when. */
 
@@ -101,11 +102,15 @@ const withCurrent = (state: LiveState, current: StepRowView | null): LiveState =
 
 /** A view that is older than what was seen is kept out: a slow answer must not turn the screen back. */
 function withView(state: LiveState, view: RunView): LiveState {
-  if (state.view !== null && view.lastSeq < state.view.lastSeq) return state;
+  if (state.view !== null && view.lastSeq < state.view.lastSeq && !brokeOff(state.view, view)) return state;
   // Rig and protocol are fixed for a run: keeping the first ones keeps everything that is worked out from them.
   const known = state.view?.id === view.id ? { ...view, rig: state.view.rig, protocol: state.view.protocol } : view;
   return { ...state, view: known, seenSeq: Math.max(state.seenSeq, view.lastSeq) };
 }
+
+/** What the database refused of a run is known to the page, and to nobody else any more. */
+const brokeOff = (before: RunView, view: RunView): boolean =>
+  view.quarantine !== null && before.quarantine === null && !isOver(before.state);
 
 function withEvent(state: LiveState, event: ChainedEvent): LiveState {
   const newest = state.events.at(-1)?.seq ?? 0;

@@ -16,6 +16,7 @@ import { LinkChip, LostNotice } from './link-chip';
 import { serverOffsetMs } from './live-reducer';
 import { LiveStrip } from './live-strip';
 import { PlanPanel } from './plan-panel';
+import { QuarantineScreen } from './quarantine-screen';
 import { RecentSteps, TextLink } from './recent-steps';
 import { ResultScreen } from './result-screen';
 import { RehearsalAtWork } from './rehearsal-at-work';
@@ -52,7 +53,9 @@ export function RunScreen() {
     );
   }
   if (view.state === 'rehearsing') return <RehearsalAtWork view={view} refresh={live.refresh} />;
-  return isOver(view.state) ? <ResultScreen view={view} /> : <LiveScreen view={view} live={live} />;
+  if (isOver(view.state)) return <ResultScreen view={view} />;
+  if (view.quarantine === null) return <LiveScreen view={view} live={live} />;
+  return <QuarantineScreen view={view} quarantine={view.quarantine} beat={live.state.beat} refresh={live.refresh} />;
 }
 
 /** Whether a run may be there although it cannot be shown. */

@@ -10,6 +10,7 @@ import { lineOf } from '../http/line-view';
 import { AnswerCounts } from '../http/metrics';
 import { Reviews } from '../http/reviews';
 import { StartSeeds } from '../http/start-seeds';
+import { tellStored } from '../http/run-view';
 import type { Services } from '../http/services';
 import { AlarmWatch } from '../http/work/alarm-watch';
 import { workEvaluation } from '../http/work/evaluation-job';
@@ -81,7 +82,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     onLine: (rigId) => (lines.changed(rigId), told.rigChanged(rigId)),
     onTaken: (rig) => background.add(taking.takenOver(rig), 'taking a rig over'),
     onDatabase: (sinceUtcMs) => watch.noteDatabase((awaySinceUtcMs = sinceUtcMs)),
-    onQuarantine: ({ start }) => services.activeRuns.remove(start.runId),
+    onQuarantine: ({ start }) => (services.activeRuns.remove(start.runId), tellStored(services, { labId: start.labId, id: start.runId })),
     onNotice: (start, notice) => tellStarter(services, start, notice),
     onLinkEvent: (station, event, wasArmed) => watch.heard(station, event, wasArmed),
   });

@@ -1,4 +1,4 @@
-import { appendEvent, type Sha256 } from '@/shared/archive/chain';
+import type { Sha256 } from '@/shared/archive/chain';
 import type { RunStart } from '@/shared/archive/run-records';
 import { type Finding, refusalCodeOf } from '@/shared/protocol/finding';
 import { planTimeline } from '@/shared/protocol/timeline';
@@ -9,6 +9,7 @@ import type { SampleReader } from '../interfaces/sample-reader';
 import type { TurntableLink } from '../interfaces/turntable-link';
 import { isRunOver } from './chart';
 import { checkAtStart } from './check-at-start';
+import { givenUp } from './given-up';
 import { keptRun } from './kept-run';
 import { type Arm, CHART_VERSION } from './run-context';
 import { RunDriver } from './run-driver';
@@ -62,7 +63,11 @@ export class StartRefused extends Error {
 export interface QuarantinedRun {
   start: RunStart;
   why: string;
+  cause: QuarantineCause;
 }
+
+/** `other-version`: what is stored was written by another version; `no-link`: its rig has none; `broken`: it could not be read, or not be written on. */
+export type QuarantineCause = 'other-version' | 'no-link' | 'broken';
 
 const hasEnded = ({ snapshot, chartVersion }: StoredRun) => {
   const found = restored(snapshot, chartVersion);
@@ -75,6 +80,8 @@ function innermost(error: unknown): string {
   const message = error instanceof Error ? error.message : String(error);
   return message.endsWith('.') ? message : `${message}.`;
 }
+
+const thenEnd = 'Look at the rig, then end the run.';
 
 const LONGEST_PAUSE_MS = 5_000;
 /** A process that has lost a rig is told so within this, ms: it renews its leases as often. */
@@ -167,28 +174,24 @@ export class RigSupervisor {
   }
 
   /**
-   * Ends a quarantined run as failed, in the name of the person who looked at the rig, and frees the rig. Its snapshot stays as it was.
+   * Ends a quarantined run as failed, in the name of the person who looked at the rig, and frees the rig. What a journal kept of it is
+   * brought into its log first; where that cannot be, it is set aside.
+   * @throws StaleRunError where another process has written into the run
    */
   async giveUp(rigId: string, by: string): Promise<void> {
     const run = this.quarantine.get(rigId);
     if (run === undefined) return;
     const { store, clock, sha256 } = this.parts;
     const { labId, runId } = run.start;
-    const stored = await store.load(labId, runId);
-    if (stored === null) return;
-    const endedAtUtcMs = clock.utcMs();
-    const event = appendEvent(
-      stored.chain,
-      { at: new Date(endedAtUtcMs).toISOString(), kind: 'failed', data: { code: 'given-up', by, reason: run.why } },
-      sha256,
-    );
-    const { snapshot, chartVersion } = stored;
-    const summary = { state: 'failed', outcome: 'failed' as const, startedAtUtcMs: null, endedAtUtcMs, predictedEndUtcMs: null };
-    await store.commit({ labId, runId, expectedSeq: stored.chain.seq, snapshot, chartVersion, steps: [], events: [event], summary });
+    const stored = await this.withItsJournal(run.start);
+    if (stored !== null && !hasEnded(stored)) {
+      const end = { by, why: run.why, nowUtcMs: clock.utcMs(), sha256 };
+      await store.commit(givenUp(stored, await store.leftOpen(labId, runId), end));
+    }
     this.quarantine.delete(rigId);
   }
 
-  /** Frees a rig from a run that cannot be taken up, after somebody has looked at it and ended the run. */
+  /** Frees a rig from a run whose end its log could not take. */
   release(rigId: string): void {
     this.quarantine.delete(rigId);
   }
@@ -242,13 +245,13 @@ export class RigSupervisor {
       if (isPassing(error) || error instanceof RigLostError)
         return void clock.after(Math.min(100 * 2 ** turn, LONGEST_PAUSE_MS), () => void this.takeUp(found, turn + 1));
       onError?.(error, start);
-      this.putAside({ start, why: `The run could not be taken up: ${innermost(error)} Look at the rig, then end the run.` });
+      this.putAside({ start, why: `The run could not be taken up: ${innermost(error)} ${thenEnd}`, cause: 'broken' });
     }
   }
 
   private decide(start: RunStart, stored: StoredRun): void {
-    const why = this.unfitness(stored);
-    if (why !== null) return this.putAside({ start, why });
+    const unfit = this.unfitness(stored);
+    if (unfit !== null) return this.putAside({ start, ...unfit });
     if (!hasEnded(stored)) this.drive(start, stored, this.parts.linkOf(start.rigId) as TurntableLink).recover();
     this.undecided.delete(start.rigId);
   }
@@ -277,14 +280,31 @@ export class RigSupervisor {
     const { start } = driver.parts;
     if (this.byRig.get(start.rigId) !== driver) return;
     this.byRig.delete(start.rigId);
-    this.putAside({ start, why: `The run broke off and the turntable was held: ${innermost(error)} Look at the rig, then end the run.` });
+    this.putAside({ start, why: `The run broke off and the turntable was held: ${innermost(error)} ${thenEnd}`, cause: 'broken' });
   }
 
-  private unfitness({ start, chartVersion, snapshot }: StoredRun): string | null {
+  private unfitness({ start, chartVersion, snapshot }: StoredRun): Omit<QuarantinedRun, 'start'> | null {
     if (snapshot !== null && restored(snapshot, chartVersion) === null) {
-      return `The run was saved by another version of the run engine (${chartVersion}; this one reads ${CHART_VERSION}). Look at the rig, then end the run.`;
+      const versions = `${chartVersion}; this one reads ${CHART_VERSION}`;
+      return { why: `The run was saved by another version of the run engine (${versions}). ${thenEnd}`, cause: 'other-version' };
     }
-    return this.parts.linkOf(start.rigId) === null ? 'The rig has no link any more. Set one up, then start the server again.' : null;
+    if (this.parts.linkOf(start.rigId) !== null) return null;
+    return { why: 'The rig has no link any more. Set one up, then start the server again.', cause: 'no-link' };
+  }
+
+  private async withItsJournal(start: RunStart): Promise<StoredRun | null> {
+    const { store, journals, isPassing, onError } = this.parts;
+    const found = await store.load(start.labId, start.runId);
+    if (found === null) return null;
+    const journal = journals.of(start);
+    try {
+      return await keptRun(found, { store, journal, onAside: (error) => onError?.(error, start) });
+    } catch (error) {
+      if (isPassing(error) || error instanceof RigLostError) throw error;
+      const aside = await journal.setAside();
+      onError?.(new Error(`what a journal kept of the run lies in ${aside}`, { cause: error }), start);
+      return store.load(start.labId, start.runId);
+    }
   }
 
   private drive(start: RunStart, stored: StoredRun | null, link: TurntableLink): RunDriver {

@@ -2,6 +2,8 @@ import type { RunStart } from '@/shared/archive/run-records';
 import type { LiveMessages, RunSummary, RunView } from '@/shared/contracts/runs';
 import type { WaitingView } from '@/shared/contracts/waiting';
 import { factsOf, plannedRun, type RunFacts, type WaitingFacts } from '../engine/run-facts';
+import { isRunOver } from '../engine/chart';
+import type { RunSnapshot } from '../engine/run-context';
 import { restored } from '../engine/stored-snapshot';
 import { findRun, readSteps, type RunListRow, type RunRecord } from '../store/runs-read';
 import { isoOf, isoOrNull } from './maker';
@@ -38,7 +40,10 @@ export function runSummaryOf(row: RunListRow): RunSummary {
 
 /** A run as the database holds it, whoever drives it. */
 export async function storedRunView(services: Services, run: RunRecord): Promise<RunView> {
-  return runViewOf(run, await factsOfStored(services, run));
+  const quarantined = services.supervisor.quarantinedOf(run.rigId);
+  const aside = quarantined?.start.runId === run.id ? quarantined : null;
+  const view = runViewOf(run, await factsOfStored(services, run, aside?.why ?? null));
+  return aside === null ? view : { ...view, quarantine: { cause: aside.cause, why: aside.why } };
 }
 
 /** What a list shows of a run, by the engine that drives it. */
@@ -82,12 +87,22 @@ export function runViewOf(run: RunListRow & { start: RunStart }, facts: RunFacts
     mayResume: facts.mayResume,
     maySkip: facts.maySkip,
     lastSeq: facts.lastSeq,
+    quarantine: null,
     rig: start.rig,
     protocol: start.protocol,
     simulated:
       start.simulated === null ? null : { trueG: start.simulated.trueG, seed: start.simulated.seed, rateHz: start.simulated.rateHz },
     ...(start.shuffleSeed === undefined ? {} : { shuffleSeed: start.shuffleSeed }),
   };
+}
+
+/** Tells those who follow a run what is stored of it now: no driver does. */
+export function tellStored(services: Services, { labId, id }: { labId: string; id: string }): void {
+  const telling = async () => {
+    const run = await findRun(services.database.db, labId, id);
+    if (run !== null) services.runChanged(id, { events: [], steps: [], progress: progressOf(await storedRunView(services, run)) });
+  };
+  services.background(telling(), 'telling of a run that nobody drives');
 }
 
 /** Rig and protocol went out with the first snapshot: with every change they would be nine tenths of all that is sent. */
@@ -97,7 +112,7 @@ export function progressOf(view: RunView): LiveMessages['progress'] {
   const { dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq } = view;
   return {
     ...{ state, startedAt, endedAt, predictedEndAt, reason, current, deadlineAt },
-    ...{ dwellsGood, waiting, reversal, finishing },
+    ...{ dwellsGood, waiting, reversal, finishing, quarantine: view.quarantine },
     ...{ dwellsDone, dwellsPlanned, holdAfterDwell, position, intervention, mayResume, maySkip, lastSeq },
   };
 }
@@ -120,13 +135,18 @@ function waitingViewOf({ kind, text, givesUpUtcMs, otherwise, firstLookUtcMs, fo
   };
 }
 
-async function factsOfStored(services: Services, run: RunRecord): Promise<RunFacts> {
+/** The snapshot that tells of the run; null where there is none, or where the run went another way than it says. */
+function tellingSnapshot(run: RunRecord, isAside: boolean): RunSnapshot | null {
+  const ended = ['finished', 'stopped', 'failed'].includes(run.state);
+  const snapshot = isAside ? null : restored(run.snapshot, run.chartVersion);
+  return snapshot === null || (ended && !isRunOver(snapshot)) ? null : snapshot;
+}
+
+async function factsOfStored(services: Services, run: RunRecord, why: string | null): Promise<RunFacts> {
   const planned = plannedRun(run.start, startUtcMsOf(run));
-  const snapshot = restored(run.snapshot, run.chartVersion);
-  const quarantined = services.supervisor.quarantinedOf(run.rigId);
-  const why = quarantined?.start.runId === run.id ? quarantined.why : null;
-  if (snapshot !== null) {
-    const facts = factsOf({
+  const snapshot = tellingSnapshot(run, why !== null);
+  if (snapshot !== null)
+    return factsOf({
       start: run.start,
       snapshot,
       nowUtcMs: services.clock.utcMs(),
@@ -136,9 +156,6 @@ async function factsOfStored(services: Services, run: RunRecord): Promise<RunFac
       predictedEndUtcMs: run.predictedEndAt,
       planned,
     });
-    // What is stored is not what goes on: nobody drives it, and the page says why.
-    return why === null ? facts : { ...facts, reason: why };
-  }
   const steps = await readSteps(services.database.db, { labId: run.labId, runId: run.id });
   return {
     runId: run.id,

@@ -3,6 +3,8 @@ import type { RunStart, StepRow, ChainedEvent } from '@/shared/archive/run-recor
 /** Where runs are kept. One `commit` is one transaction: all of it or nothing. */
 export interface RunStore {
   load(labId: string, runId: string): Promise<StoredRun | null>;
+  /** What a run that nobody can carry on left open: its rows without an outcome, and when it had started. */
+  leftOpen(labId: string, runId: string): Promise<LeftOpen>;
   /** Runs that have not ended, of the rigs this process drives. */
   unfinished(): Promise<StoredRun[]>;
   /**
@@ -19,6 +21,11 @@ export interface StoredRun {
   chartVersion: number;
   /** Last sequence number and hash of the event chain. */
   chain: { seq: number; hash: string };
+}
+
+export interface LeftOpen {
+  startedAtUtcMs: number | null;
+  steps: StepRow[];
 }
 
 export interface RunWrite {
@@ -41,6 +48,8 @@ export interface RunSummaryColumns {
   startedAtUtcMs: number | null;
   endedAtUtcMs: number | null;
   predictedEndUtcMs: number | null;
+  /** Why it failed, where no snapshot says so. */
+  failure?: string;
 }
 
 export class StaleRunError extends Error {

@@ -1,9 +1,9 @@
-import { and, asc, eq, exists, notInArray, sql } from 'drizzle-orm';
+import { and, asc, eq, exists, isNull, notInArray, sql } from 'drizzle-orm';
 import { rigLeases, runEvents, runs, runSteps } from '@/db/schema';
 import type { ChainHead } from '@/shared/archive/chain';
 import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
 import type { RunState } from '@/shared/contracts/runs';
-import { RigLostError, StaleRunError, type RunStore, type RunWrite, type StoredRun } from '../interfaces/run-store';
+import { type LeftOpen, RigLostError, StaleRunError, type RunStore, type RunWrite, type StoredRun } from '../interfaces/run-store';
 import type { Database, Handle, Transaction } from './database';
 
 /** Rows of one INSERT: PostgreSQL takes at most 65 535 parameters a statement. */
@@ -69,6 +69,7 @@ export function createRunStore(db: Database, holder: string | null = null): RunS
         .where(and(eq(runs.labId, labId), eq(runs.id, runId)));
       return row === undefined ? null : storedRunOf(row);
     },
+    leftOpen: (labId, runId) => leftOpen(db, { labId, runId }),
     unfinished: async () => {
       const rows = await db
         .select(storedColumns)
@@ -79,6 +80,20 @@ export function createRunStore(db: Database, holder: string | null = null): RunS
     },
     commit: (write) => db.transaction((tx) => commit(tx, write, holder)),
   };
+}
+
+async function leftOpen(db: Database, { labId, runId }: { labId: string; runId: string }): Promise<LeftOpen> {
+  const [run] = await db
+    .select({ startedAt: runs.startedAt })
+    .from(runs)
+    .where(and(eq(runs.labId, labId), eq(runs.id, runId)));
+  const rows = await db
+    .select()
+    .from(runSteps)
+    .where(and(eq(runSteps.labId, labId), eq(runSteps.runId, runId), isNull(runSteps.outcome)))
+    .orderBy(asc(runSteps.seq));
+  const steps = rows.map(({ labId: _lab, runId: _run, ...step }) => step);
+  return { startedAtUtcMs: run?.startedAt ?? null, steps };
 }
 
 const storedColumns = {
@@ -121,6 +136,7 @@ async function commit(tx: Transaction, write: RunWrite, holder: string | null): 
       startedAt: summary.startedAtUtcMs,
       endedAt: summary.endedAtUtcMs,
       predictedEndAt: summary.predictedEndUtcMs,
+      ...(summary.failure === undefined ? {} : { failure: summary.failure }),
     })
     .where(holder === null ? own : and(own, leaseOf(tx, holder)))
     .returning({ id: runs.id });

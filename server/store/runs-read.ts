@@ -196,6 +196,7 @@ export async function storeRehearsal(db: Database, run: { labId: string; id: str
     startedAtUtcMs: records.startedAtUtcMs,
     endedAtUtcMs: records.endedAtUtcMs,
     predictedEndUtcMs: null,
+    ...(records.reason === '' ? {} : { failure: records.reason }),
   };
   await createRunStore(db).commit({
     labId: run.labId,
@@ -207,9 +208,4 @@ export async function storeRehearsal(db: Database, run: { labId: string; id: str
     events: records.events,
     summary,
   });
-  if (records.reason !== '')
-    await db
-      .update(runs)
-      .set({ failure: records.reason })
-      .where(and(eq(runs.labId, run.labId), eq(runs.id, run.id)));
 }

@@ -145,7 +145,7 @@ const kinds = {
     title: 'Run cannot be carried on',
     cause: 'An unfinished run was written by a version that this server does not know, or the database refuses what it has to save.',
     consequence: 'Nothing is done with it, and its rig stays blocked until somebody decides.',
-    answer: 'Read the reason; start the server version that wrote it, or give the run up on its screen.',
+    answer: 'Read the reason; start the server version that wrote it, or end the run on its screen.',
   },
   'not-driven': {
     ...always,

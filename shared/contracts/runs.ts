@@ -56,6 +56,8 @@ export const runViewSchema = runSummarySchema.extend({
   maySkip: z.strictObject({ ok: z.boolean(), why: z.string(), seq: z.number().int().nullable() }),
   /** Last sequence number of the event chain. */
   lastSeq: z.number().int(),
+  /** Set where the server found the run and cannot carry it on: nothing moves, the rig stays blocked until somebody ends the run. `why` in sentences. */
+  quarantine: z.strictObject({ cause: z.enum(['other-version', 'no-link', 'broken']), why: z.string() }).nullable(),
   rig: rigDocumentSchema,
   protocol: protocolDocumentSchema,
   simulated: z.strictObject({ trueG: z.number(), seed: z.number(), rateHz: z.number() }).nullable(),
@@ -85,6 +87,7 @@ const runProgressSchema = runViewSchema.pick({
   mayResume: true,
   maySkip: true,
   lastSeq: true,
+  quarantine: true,
 });
 
 /** Messages of the live stream of a run (server-sent events). `snapshot`, `progress` and `event` carry the chain's seq as id. */

@@ -1,8 +1,7 @@
-import type { AxeResults, run } from 'axe-core';
-import { readFileSync } from 'node:fs';
 import { demoIds } from '@/db/demo/seed';
 import { reportCondition } from '@/server/store/alarms';
 import { sizes, type Size } from '../support/browser';
+import { findings, themes } from './support/axe';
 import { bringsIn, checksAnother } from './support/brought-in';
 import { Hand, until } from './support/hand';
 import { labOfThisFile } from './support/lab';
@@ -11,9 +10,7 @@ import { finishedNight, issued, read, shortNight, started } from './support/nigh
 /** Every screen by axe in the three themes, targets a thumb can meet, and pages that fit the narrowest phone. */
 
 jest.setTimeout(240_000);
-const axeSource = readFileSync(require.resolve('axe-core/axe.min.js'), 'utf8');
 const lab = labOfThisFile();
-const themes = ['dark', 'light', 'red'] as const;
 
 interface Place {
   name: string;
@@ -149,32 +146,6 @@ async function narrow(hand: Hand, { name }: Place): Promise<string[]> {
   }
   await hand.page.setViewportSize(sizes.phone);
   return found.map((what) => `sideways: ${what}`);
-}
-
-/** Serious and critical findings, each with where. In a theme only colours are new. */
-async function findings(hand: Hand, theme: (typeof themes)[number]): Promise<string[]> {
-  await hand.page.evaluate((name) => {
-    const page = document.documentElement;
-    page.className = page.className.replace(/theme-\w+/g, '');
-    page.classList.add(`theme-${name}`);
-  }, theme);
-  if (!(await hand.page.evaluate(() => 'axe' in window))) await hand.page.evaluate(axeSource);
-  // What lies under a sheet cannot be reached, and is looked at on its own.
-  const under = (await hand.page.locator('dialog').first().isVisible()) ? 'dialog' : 'html';
-  const { violations } = await hand.page.evaluate(
-    ([place, rules]): Promise<AxeResults> =>
-      (window as unknown as { axe: { run: typeof run } }).axe.run(place, {
-        resultTypes: ['violations'],
-        preload: false,
-        ...(rules === null ? {} : { runOnly: { type: 'rule', values: rules } }),
-      }),
-    [under, theme === 'dark' ? null : ['color-contrast']] as const,
-  );
-  return violations
-    .filter(({ impact }) => impact === 'serious' || impact === 'critical')
-    .flatMap(({ id, nodes }) =>
-      nodes.map((node) => `${theme}: ${id} at ${node.target.join(' ')}: ${(node.failureSummary ?? '').split('\n').slice(1, 3).join(' ')}`),
-    );
 }
 
 describe.each(Object.keys(sizes) as Size[])('%s', (size) => {

@@ -79,6 +79,7 @@ export class LabSide {
       mayResume: { ok: this.state === 'held', why: '' },
       maySkip: { ok: false, why: '', seq: null },
       lastSeq: this.events.length,
+      quarantine: null,
       ...{ rig: demoRigWide, protocol, simulated: null },
     };
   }

@@ -1,6 +1,6 @@
 import { type ChainHead, emptyChain } from '@/shared/archive/chain';
 import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
-import { type RunStore, type RunWrite, StaleRunError, type StoredRun } from '@/server/interfaces/run-store';
+import { type LeftOpen, type RunStore, type RunWrite, StaleRunError, type StoredRun } from '@/server/interfaces/run-store';
 
 export const databaseAway = () => Object.assign(new Error('the connection broke before the answer'), { code: 'ECONNRESET' });
 
@@ -25,6 +25,10 @@ export class SimulatedStore implements RunStore {
   async unfinished(): Promise<StoredRun[]> {
     const run = await this.load();
     return run === null || this.stored === null ? [] : [run];
+  }
+
+  async leftOpen(): Promise<LeftOpen> {
+    return { startedAtUtcMs: null, steps: [...this.rows.values()].filter(({ outcome }) => outcome === null) };
   }
 
   async commit(write: RunWrite): Promise<void> {

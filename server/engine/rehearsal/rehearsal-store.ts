@@ -1,6 +1,6 @@
 import { type ChainHead, emptyChain } from '@/shared/archive/chain';
 import type { ChainedEvent, RunStart, StepRow } from '@/shared/archive/run-records';
-import { type RunStore, type RunWrite, StaleRunError, type StoredRun } from '../../interfaces/run-store';
+import { type LeftOpen, type RunStore, type RunWrite, StaleRunError, type StoredRun } from '../../interfaces/run-store';
 
 /** Keeps one run in memory: what a rehearsal leaves. */
 export class RehearsalStore implements RunStore {
@@ -18,6 +18,10 @@ export class RehearsalStore implements RunStore {
   async unfinished(): Promise<StoredRun[]> {
     const run = await this.load();
     return run === null ? [] : [run];
+  }
+
+  async leftOpen(): Promise<LeftOpen> {
+    return { startedAtUtcMs: null, steps: this.steps().filter(({ outcome }) => outcome === null) };
   }
 
   async commit(write: RunWrite): Promise<void> {

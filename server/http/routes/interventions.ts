@@ -9,6 +9,8 @@ import { resumePlan, skipPlan, type RemainingPlan } from '@/server/engine/remain
 import type { RunDriver } from '@/server/engine/run-driver';
 import type { Answer } from '@/server/engine/run-driver-parts';
 import type { Clock } from '@/server/interfaces/clock';
+import { StaleRunError } from '@/server/interfaces/run-store';
+import { isPassing } from '@/server/store/failures';
 import { findRevision } from '@/server/store/protocols';
 import { findMassSet, findRig } from '@/server/store/rigs';
 import * as store from '@/server/store/runs-read';
@@ -19,7 +21,7 @@ import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount, type SignedIn } from '../route-context';
 import { resumeSubject, skipSubject, startSubject } from '../reviews';
-import { loadRun } from '../run-view';
+import { loadRun, tellStored } from '../run-view';
 import type { Services } from '../services';
 
 const longestWaitMs = 20_000;
@@ -234,13 +236,23 @@ function assertNothingInTheWay(services: Services, { driver, rigId, answer }: { 
   throw new ProblemError(locked ? 'locked' : disarmed ? 'not-armed' : 'not-possible-now', answer.why);
 }
 
-/** Ends a run that this version cannot drive: nothing moves, and the rig is free again. */
+/** Ends a run that this version cannot drive: nothing moves, and the rig is free again. Where its log does not take the end, its row alone says it. */
 async function endQuarantined(caller: Caller, run: store.RunRecord): Promise<{ runId: string; serverAt: string }> {
   const { services, me } = caller;
   const nowUtcMs = services.clock.utcMs();
-  const why = services.supervisor.quarantinedOf(run.rigId)?.why ?? '';
-  await store.markRunFailed(services.database.db, run, { why: `${why} Ended by ${me.name}.`, nowUtcMs });
-  services.supervisor.release(run.rigId);
+  const { supervisor, log } = services;
+  const why = supervisor.quarantinedOf(run.rigId)?.why ?? '';
+  try {
+    await supervisor.giveUp(run.rigId, me.name);
+  } catch (error) {
+    if (error instanceof StaleRunError)
+      throw new ProblemError('not-possible-now', 'Another server has written into this run meanwhile. Look at the run again.');
+    if (isPassing(error)) throw error;
+    log.error({ err: error, runId: run.id }, 'the log of a run did not take its end');
+    await store.markRunFailed(services.database.db, run, { why: `${why} Ended by ${me.name}.`, nowUtcMs });
+    supervisor.release(run.rigId);
+  }
+  tellStored(services, run);
   auditLater(caller, 'run.stop-asked', { runId: run.id });
   return { runId: run.id, serverAt: isoOf(nowUtcMs) };
 }

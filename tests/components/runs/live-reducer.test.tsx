@@ -41,6 +41,7 @@ describe('what arrives', () => {
       waiting,
       reversal,
       finishing,
+      quarantine,
     } = viewAt(nowUtcMs);
     const same = {
       startedAt,
@@ -58,6 +59,7 @@ describe('what arrives', () => {
       waiting,
       reversal,
       finishing,
+      quarantine,
     };
     const [, row] = rowsAt(nowUtcMs);
     const progress = (lastSeq: number, change: Partial<{ state: 'held'; reason: string }>): LiveMessage => ({

@@ -1,9 +1,10 @@
 import { strFromU8, unzipSync } from 'fflate';
 import { demoIds } from '@/db/demo/seed';
+import { verifyChain } from '@/shared/archive/chain';
 import type { ChainedEvent } from '@/shared/archive/run-records';
 import type { Step } from '@/shared/protocol/document';
 import { databaseOfThisFile } from '@/tests/support/database';
-import { LabServer, quickProtocol } from '@/tests/support/lab-server';
+import { LabServer, quickProtocol, sha256 } from '@/tests/support/lab-server';
 
 jest.setTimeout(60_000);
 
@@ -117,13 +118,22 @@ test('a run saved by another version of the engine is left alone, blocks its rig
     state: 'held',
     reason: expect.stringContaining('another version of the run engine (99'),
     mayResume: { ok: false },
+    quarantine: { cause: 'other-version' },
   });
+  const { startedAt } = await lab.view(runId);
   expect((await lab.intervene(runId, 'resume').expect(409)).body.detail).toContain('Look at the rig');
   const protocolId = await lab.issue(quickProtocol());
   await lab.arm();
   expect((await lab.askStart(protocolId).expect(409)).body.code).toBe('rig-busy');
   await lab.intervene(runId, 'stop', { who: 'keeper' }).expect(202);
-  expect(await lab.view(runId)).toMatchObject({ state: 'failed', reason: expect.stringContaining('Ended by Casimir Thornquist') });
+  expect(await lab.view(runId)).toMatchObject({
+    ...{ state: 'failed', startedAt, quarantine: null, current: null },
+    reason: expect.stringContaining('Ended by Casimir Thornquist'),
+  });
+  const events = await eventsOf(runId);
+  expect(events.at(-1)).toMatchObject({ kind: 'failed', data: { code: 'given-up', by: 'Casimir Thornquist' } });
+  expect(verifyChain(events, sha256).valid).toBe(true);
+  expect((await stepsOf(runId)).filter(({ outcome }) => outcome === null)).toEqual([]);
   await lab.askStart(protocolId).expect(201);
 });
 

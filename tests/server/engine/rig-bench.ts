@@ -3,7 +3,7 @@ import type { RunStart, StepRow, ChainedEvent } from '@/shared/archive/run-recor
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import { demoRigWide } from '@/shared/rig/demo-rigs';
 import type { SampleReader } from '@/server/interfaces/sample-reader';
-import { type RunStore, type RunWrite, StaleRunError, type StoredRun } from '@/server/interfaces/run-store';
+import { type LeftOpen, type RunStore, type RunWrite, StaleRunError, type StoredRun } from '@/server/interfaces/run-store';
 import { MemoryJournal } from '@/server/engine/memory-journal';
 import { mergeWrites, withAllToPerform } from '@/server/engine/merge-journal';
 import { RunDriver } from '@/server/engine/run-driver';
@@ -72,6 +72,10 @@ export class MemoryStore implements RunStore {
   async unfinished(): Promise<StoredRun[]> {
     const run = await this.load();
     return run === null ? [] : [run];
+  }
+
+  async leftOpen(): Promise<LeftOpen> {
+    return { startedAtUtcMs: null, steps: this.log().filter(({ outcome }) => outcome === null) };
   }
 
   async commit(write: RunWrite): Promise<void> {

@@ -179,6 +179,10 @@ test('a run of another chart version is quarantined: nothing is sent, and its ri
   await lab.clock.advance(60_000);
   expect(lab.north.commands).toEqual([]);
   await supervisor.giveUp('north-bench', 'Cleo');
-  expect(lab.runs.byId.get('run-1')?.events).toMatchObject([{ seq: 1, kind: 'failed', data: { by: 'Cleo' } }]);
+  expect(lab.runs.byId.get('run-1')?.events).toMatchObject([{ seq: 1, kind: 'failed', data: { code: 'given-up', by: 'Cleo' } }]);
+  expect(JSON.parse((lab.runs.byId.get('run-1') as MemoryStore).stored ?? '')).toMatchObject({
+    snapshot: { version: 99 },
+    chartVersion: 99,
+  });
   expect(supervisor.startRun(lab.make({ runId: 'run-2' })).runId).toBe('run-2');
 });

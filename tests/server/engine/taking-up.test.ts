@@ -87,6 +87,58 @@ test('a journal that the database refuses blocks its rig at once, with a sentenc
   expect(next.activeOf('south-bench')?.runId).toBe('run-2');
 });
 
+describe('ending a run that could not be taken up', () => {
+  async function quarantined(): Promise<{ lab: Lab; start: RunStart; store: MemoryStore; next: ReturnType<Lab['newSupervisor']> }> {
+    const lab = makeLab();
+    const { start, store } = await leftInJournal(lab);
+    store.fault = () => {
+      throw new Error('value too long for type character varying(8)');
+    };
+    const next = lab.newSupervisor();
+    await next.recover();
+    expect(next.quarantinedOf(start.rigId)).toMatchObject({ cause: 'broken', start: { runId: start.runId } });
+    return { lab, start, store, next };
+  }
+  const open = (store: MemoryStore) => store.log().filter(({ outcome }) => outcome === null);
+
+  test('what its journal kept goes into the log first; then its log says who ended it, and its open row fails', async () => {
+    const { lab, start, store, next } = await quarantined();
+    store.fault = () => 'none';
+    expect(open(store)).toHaveLength(1);
+    await lab.clock.advance(3_600_000);
+    await next.giveUp(start.rigId, 'Cleo');
+    expect(store.kinds()).toContain('hold-requested');
+    expect(store.events.at(-1)).toMatchObject({
+      kind: 'failed',
+      at: new Date(lab.clock.utcMs()).toISOString(),
+      data: { code: 'given-up', by: 'Cleo' },
+    });
+    expect(verifyChain(store.events, sha256).valid).toBe(true);
+    expect(open(store)).toEqual([]);
+    expect(await lab.journals.of(start).read()).toEqual([]);
+    expect(next.takenBy(start.rigId)).toBeNull();
+  });
+
+  test('a journal that the database goes on refusing is set aside, and the run ends without it', async () => {
+    const { lab, start, store, next } = await quarantined();
+    store.fault = ({ events }) => {
+      if (events.some(({ kind }) => kind === 'hold-requested')) throw new Error('value too long for type character varying(8)');
+      return 'none';
+    };
+    await next.giveUp(start.rigId, 'Cleo');
+    expect(store.events.at(-1)).toMatchObject({ kind: 'failed', data: { code: 'given-up' } });
+    expect(open(store)).toEqual([]);
+    expect(await lab.journals.of(start).read()).toEqual([]);
+  });
+
+  test('while the database is away nothing is ended, and the rig stays blocked', async () => {
+    const { start, store, next } = await quarantined();
+    store.fault = () => 'away';
+    await expect(next.giveUp(start.rigId, 'Cleo')).rejects.toThrow('connection broke');
+    expect(next.quarantinedOf(start.rigId)).not.toBeNull();
+  });
+});
+
 test('a run that the database refuses to save blocks its rig, with a sentence, until somebody ends it; no other run notices', async () => {
   const lab = makeLab();
   const supervisor = lab.newSupervisor();

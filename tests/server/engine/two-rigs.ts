@@ -2,7 +2,7 @@ import { MemoryJournals } from '@/server/engine/memory-journal';
 import { type QuarantinedRun, RigSupervisor, StartRefused } from '@/server/engine/rig-supervisor';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import type { Arm, Effect } from '@/server/engine/run-context';
-import type { RunStore, RunWrite, StoredRun } from '@/server/interfaces/run-store';
+import type { LeftOpen, RunStore, RunWrite, StoredRun } from '@/server/interfaces/run-store';
 import { isPassing } from '@/server/store/failures';
 import type { RunStart } from '@/shared/archive/run-records';
 import { FakeLink } from './fake-link';
@@ -18,6 +18,7 @@ class Runs implements RunStore {
     return start;
   }
   load = (_labId: string, runId: string): Promise<StoredRun | null> => this.byId.get(runId)?.load() ?? Promise.resolve(null);
+  leftOpen = (_labId: string, runId: string): Promise<LeftOpen> => (this.byId.get(runId) as MemoryStore).leftOpen();
   unfinished = async (): Promise<StoredRun[]> => (await Promise.all([...this.byId.values()].map((store) => store.unfinished()))).flat();
   commit = (write: RunWrite): Promise<void> => (this.byId.get(write.runId) as MemoryStore).commit(write);
 }
