@@ -2,7 +2,8 @@ import { moveKinds } from '../board/seeded-moves';
 import { clockKinds } from '../clock/clock-kinds';
 import { lineKinds } from '../fuzz/try-lines';
 import { heartbeatKinds } from '../heartbeat/try-loss';
-import { linkKinds } from '../link/try-night';
+import { fileKinds } from '../import/try-file';
+import { linkKinds, serialKinds } from '../link/try-night';
 import { phoneKinds } from '../phone/try-phone';
 import { nightKinds } from '../run/checks';
 import type { SeededKinds } from './try-seeds';
@@ -13,7 +14,9 @@ export const allKinds: Readonly<Record<string, SeededKinds>> = {
   pins: moveKinds,
   fuzz: lineKinds,
   r1: nightKinds,
+  r2: serialKinds,
   r6: heartbeatKinds,
   r8: phoneKinds,
   r9: clockKinds,
+  r10: fileKinds,
 };

@@ -44,13 +44,12 @@ export function soakSeeds(
     }
     const { violations: more, ...figures } = await then();
     violations.push(...more);
-    return { ok: violations.length === 0, partial: isPartial(args), tried, failed, ...figures, violations };
+    return { ok: violations.length === 0, tried, failed, ...figures, violations };
   });
 }
 
 const valueOf = (args: readonly string[], name: string) => (args.includes(name) ? args[args.indexOf(name) + 1] : undefined);
 const numberOf = (args: readonly string[], name: string) => (args.includes(name) ? Number(valueOf(args, name)) : null);
-const isPartial = (args: readonly string[]) => ['--kind', '--seed', '--from', '--seeds'].some((name) => args.includes(name));
 
 function choicesOf(kinds: SeededKinds, args: readonly string[]): Choice[] {
   const only = valueOf(args, '--kind');

@@ -4,7 +4,7 @@ import { serialFaults, situations, type Situation } from '@/scripts/soak/link/si
 import { tryNight } from '@/scripts/soak/link/try-night';
 import { tryFirst } from '@/scripts/soak/seeded/try-seeds';
 
-/** More of them by `EVENFALL_LINK_SEEDS`, and by `npm run soak -- link`. */
+/** More of them by `EVENFALL_LINK_SEEDS`, and by `npm run soak -- r2 link`. */
 const ON_THE_LINE = Number(process.env['EVENFALL_LINK_SEEDS'] ?? 200);
 const AT_THE_MACHINE = Number(process.env['EVENFALL_LINK_SEEDS'] ?? 20);
 const onTheLine: readonly string[] = [...serialFaults, 'merge', 'mixed'];

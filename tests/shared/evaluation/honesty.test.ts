@@ -2,7 +2,7 @@ import { honestNight, nightKinds } from '@/scripts/soak/honesty/honest-night';
 
 /**
  * Of nights whose geometry, drift, gaps, outliers and clock nobody knows, the true G lies in the 95 % interval as often as it says.
- * 200 of each kind are for the soak `honesty`; of 30 at least 25 (the chance of fewer is 1 in 300).
+ * 200 of each kind are for `npm run soak -- r11`; of 30 at least 25 (the chance of fewer is 1 in 300).
  */
 test('of 30 nights at least 25 hold the true G in their interval, without a bias', () => {
   const nightsOf = (kind: keyof typeof nightKinds, count: number) =>
