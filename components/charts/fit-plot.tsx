@@ -2,12 +2,13 @@ import { View } from 'react-native';
 import Svg, { Circle, G, Line, Path } from 'react-native-svg';
 import { useTheme, type ThemeColors } from '@/components/theme';
 import { formatDuration } from '@/shared/lib/format-duration';
-import { formatSignificant } from '@/shared/lib/format-number';
+import { formatDeflectionUncertain } from '@/shared/lib/format-angle';
+import { residualRms } from '@/shared/evaluation/residual-rms';
 import type { FitCurve } from '@/shared/evaluation/result';
 import { Axes, mapInto, roomy, type FrameBox, type FrameScale } from './chart-frame';
 import { pathOf } from './curve';
 import { HiddenTable } from './hidden-table';
-import { residualRms, residualsOf } from './residuals';
+import { residualsOf } from './residuals';
 import { laneOf } from './strip-model';
 import { useWidth } from './use-width';
 
@@ -42,8 +43,8 @@ export function FitPlot({ curve, rangeMrad }: FitPlotProps) {
     box: { left, top: top + mainPx + betweenPx, width: width - left - 8, height: residualPx },
     scale: { x, y: [-reach, reach] as [number, number] },
   };
-  const rms = formatSignificant(residualRms(curve) * 1e6, 2);
-  const title = `Dwell ${curve.seq} at ${curve.station}: fit to ${curve.tS.length} bins over ${formatDuration(curve.tS.at(-1) ?? 0)}, residual ${rms} µrad rms.`;
+  const rms = formatDeflectionUncertain(residualRms(curve));
+  const title = `Dwell ${curve.seq} at ${curve.station}: fit to ${curve.tS.length} bins over ${formatDuration(curve.tS.at(-1) ?? 0)}, residual rms ${rms}.`;
   return (
     <View onLayout={onLayout} className="w-full min-w-0" testID="fit-plot">
       <View role="img" aria-label={title} style={{ height: heightPx }}>

@@ -1,7 +1,7 @@
 import { View } from 'react-native';
 import Svg, { Circle, Line, Rect, Text as SvgText } from 'react-native-svg';
 import { useTheme } from '@/components/theme';
-import { formatFixed } from '@/shared/lib/format-number';
+import { formatFixed, UNIT_OF_G } from '@/shared/lib/format-number';
 import { spokenUncertain } from '@/shared/lib/format-uncertain';
 import { niceTicks } from '@/shared/lib/ticks';
 import { useWidth } from './use-width';
@@ -15,7 +15,7 @@ export interface GScaleProps {
   other?: { value: number; label: string } | undefined;
 }
 
-const heightPx = 66;
+const heightPx = 84;
 const axisY = 36;
 const edgePx = 8;
 
@@ -47,7 +47,8 @@ export function GScale({ value, u, codata, other }: GScaleProps) {
     );
   const reference = other ?? { value: codata.value, label: 'CODATA' };
   const onRight = x(reference.value) < width * 0.7;
-  const label = `G is ${spokenUncertain({ value, u })}; the recommended value is ${spokenUncertain({ value: codata.value, u: codata.u })}${other ? `; ${other.label} is ${spokenUncertain({ value: other.value, u: 0 })}` : ''}.`;
+  const said = (g: number, uOf: number | null) => spokenUncertain({ value: g, u: uOf, unit: UNIT_OF_G });
+  const label = `G is ${said(value, u)}; the recommended value is ${said(codata.value, codata.u)}${other ? `; ${other.label} is ${said(other.value, 0)}, exactly` : ''}.`;
   return (
     <View onLayout={onLayout} role="img" aria-label={label} style={{ height: heightPx }} testID="g-scale">
       <Svg width={width} height={heightPx} viewBox={`0 0 ${width} ${heightPx}`} aria-hidden>
@@ -73,6 +74,9 @@ export function GScale({ value, u, codata, other }: GScaleProps) {
           fontFamily="Atkinson Hyperlegible Next"
         >
           {reference.label}
+        </SvgText>
+        <SvgText x={width - edgePx} y={axisY + 43} textAnchor="end" fill={colors.dim} fontSize={13} fontFamily="Atkinson Hyperlegible Next">
+          {`10⁻¹¹ ${UNIT_OF_G}`}
         </SvgText>
         <Circle cx={x(value)} cy={axisY} r={6} fill={colors.lamp} stroke={colors.panel} strokeWidth={2} />
       </Svg>

@@ -7,7 +7,7 @@ export { AllanPlot } from './allan-plot';
 export { BudgetBars } from './budget-bars';
 export { FitPlot } from './fit-plot';
 export { ResidualPlot } from './residual-plot';
-export { beyondAxes, residualRms, sharedAxes, type SharedAxes } from './residuals';
+export { beyondAxes, sharedAxes, type SharedAxes } from './residuals';
 export { ReversalPlot } from './reversal-plot';
 export { SparkLine } from './spark-line';
 export { TorquePlot } from './torque-plot';

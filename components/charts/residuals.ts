@@ -3,12 +3,6 @@ import type { FitCurve } from '@/shared/evaluation/result';
 /** Data minus fit of each bin, rad. */
 export const residualsOf = ({ dataRad, modelRad }: FitCurve): number[] => dataRad.map((y, index) => y - (modelRad[index] as number));
 
-/** Root mean square of data minus fit, rad. */
-export function residualRms(curve: FitCurve): number {
-  const squares = residualsOf(curve).map((rest) => rest ** 2);
-  return Math.sqrt(squares.reduce((sum, square) => sum + square, 0) / Math.max(1, squares.length));
-}
-
 export interface SharedAxes {
   /** First and last time in a dwell, s. */
   timeS: [number, number];

@@ -1,8 +1,10 @@
 import { useMemo } from 'react';
 import { Pressable, View } from 'react-native';
-import { beyondAxes, laneOf, residualRms, ResidualPlot, sharedAxes, type Lane, type SharedAxes } from '@/components/charts';
+import { beyondAxes, laneOf, ResidualPlot, sharedAxes, type Lane, type SharedAxes } from '@/components/charts';
 import { Label, Section } from '@/components/ui';
+import { residualRms } from '@/shared/evaluation/residual-rms';
 import type { FitCurve } from '@/shared/evaluation/result';
+import { formatDeflectionUncertain } from '@/shared/lib/format-angle';
 import { formatDuration } from '@/shared/lib/format-duration';
 import { formatSignificant } from '@/shared/lib/format-number';
 
@@ -57,7 +59,7 @@ interface SmallProps {
 }
 
 function Small({ curve, axes, chosen, onSelect }: SmallProps) {
-  const rms = microrad(residualRms(curve));
+  const rms = formatDeflectionUncertain(residualRms(curve));
   const beyond = beyondAxes(curve, axes);
   const out = beyond === null ? null : `${beyond.bins} beyond, to ${microrad(beyond.farthestRad)}`;
   return (
@@ -65,7 +67,7 @@ function Small({ curve, axes, chosen, onSelect }: SmallProps) {
       <Pressable
         role="button"
         aria-pressed={chosen}
-        aria-label={`Dwell ${curve.seq} at ${curve.station}, residual ${rms} rms${out === null ? '' : `, ${out}`}: show its fit`}
+        aria-label={`Dwell ${curve.seq} at ${curve.station}, residual rms ${rms}${out === null ? '' : `, ${out}`}: show its fit`}
         onPress={() => {
           onSelect(curve.seq);
           document.querySelector('[data-testid="fit-panel"]')?.scrollIntoView({ block: 'nearest' });
@@ -75,7 +77,7 @@ function Small({ curve, axes, chosen, onSelect }: SmallProps) {
       >
         <View className="flex-row flex-wrap justify-between gap-x-2">
           <Label>{curve.seq}</Label>
-          <Label>{rms} rms</Label>
+          <Label>rms {rms}</Label>
         </View>
         {out === null ? null : <Label tone="text">{out}</Label>}
         <ResidualPlot curve={curve} axes={axes} />

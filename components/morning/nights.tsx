@@ -35,7 +35,7 @@ function NightsTogether({ tonight, earlier }: { tonight: MorningNight; earlier: 
   const together = nightsTogether(tonight, earlier);
   if (together === null) return null;
   const { nights, common, widenedU, own } = together;
-  const ofOwn = `or ${formatDeflectionUncertain({ value: own.mean, u: own.u })} if each night has ${formatSignificant(own.scatter * 1e6, 2)}\u202fµrad of its own`;
+  const ofOwn = `or ${formatDeflectionUncertain({ value: own.mean, u: own.u })} if each night has ${formatDeflectionUncertain({ value: own.scatter, u: own.scatterU })} of its own`;
   return (
     <View className="flex-row flex-wrap items-baseline gap-x-3" testID="nights-together">
       <Num size={13}>{formatDeflectionUncertain({ value: common.mean, u: widenedU })}</Num>

@@ -1,6 +1,7 @@
 import { useState } from 'react';
 import { View } from 'react-native';
 import { callOnce, serverNowIso, useConnection, useLab, useMay, wordsOf } from '@/components/api';
+import { UncertainText } from '@/components/evaluation/uncertain-text';
 import { Body, Icon, Label, Num, Panel, PressAndKeep, ProblemNotice } from '@/components/ui';
 import { confirmPrompt } from '@/shared/contracts/going-on';
 import type { RunView } from '@/shared/contracts/runs';
@@ -131,6 +132,11 @@ function Prompt({ view, waiting }: { view: RunView; waiting: WaitingView }) {
   );
 }
 
+const differenceMrad = ({ differenceRad, relativeU }: NonNullable<RunView['reversal']>) => {
+  const value = 1000 * differenceRad;
+  return { value, u: relativeU === null ? null : Math.abs(relativeU * value) };
+};
+
 /** What the run has reached: dwells that count, and how well near minus far is known so far. */
 export function ReachedPanel({ view }: { view: RunView }) {
   const { dwellsDone, dwellsGood, reversal } = view;
@@ -146,9 +152,7 @@ export function ReachedPanel({ view }: { view: RunView }) {
       </View>
       {reversal === null ? null : (
         <View>
-          <Num size={20} aside="mrad">
-            {formatSignificant(1000 * reversal.differenceRad, 4)}
-          </Num>
+          <UncertainText size={20} {...differenceMrad(reversal)} unit="mrad" options={{ exponent: 0 }} testID="difference-reached" />
           <Label>near − far so far</Label>
         </View>
       )}

@@ -1,7 +1,8 @@
 import { residualAllan } from '@/shared/evaluation/residual-allan';
+import { residualRms } from '@/shared/evaluation/residual-rms';
 import type { EvaluationResult, FitCurve } from '@/shared/evaluation/result';
 import { reversalPoints } from '@/shared/evaluation/reversal-points';
-import { formatSignificant } from '@/shared/lib/format-number';
+import { formatDeflectionUncertain } from '@/shared/lib/format-angle';
 import type { ReportPage } from './report-page';
 import { plotRoomPt } from './report-plot';
 
@@ -54,8 +55,7 @@ export function plotReversals(page: ReportPage, { dwells, reversal_rad: mean }: 
   });
 }
 
-const rmsOf = ({ dataRad, modelRad }: FitCurve) =>
-  Math.sqrt(dataRad.reduce((sum, y, i) => sum + (y - (modelRad[i] as number)) ** 2, 0) / Math.max(1, dataRad.length));
+const rmsOf = (curve: FitCurve) => residualRms(curve).value;
 
 /** The dwell of usual residuals and the one of the greatest, each with its fit and what the fit leaves. */
 export function plotFits(page: ReportPage, curves: readonly FitCurve[]): void {
@@ -70,7 +70,7 @@ export function plotFits(page: ReportPage, curves: readonly FitCurve[]): void {
 function plotFit(page: ReportPage, curve: FitCurve, which: string): void {
   const at = (i: number, y: number) => ({ x: (curve.tS[i] as number) / 60, y });
   page.room(plotRoomPt(fitPt.curve) + plotRoomPt(fitPt.residuals) + 14);
-  page.line(`Row ${curve.seq} at ${curve.station}, ${which}: ${formatSignificant(rmsOf(curve) * micro, 2)} µrad rms.`);
+  page.line(`Row ${curve.seq} at ${curve.station}, ${which}: rms ${formatDeflectionUncertain(residualRms(curve))}.`);
   page.plot(
     {
       points: curve.dataRad.map((y, i) => ({ ...at(i, y * milli), mark: 'dot' })),

@@ -82,7 +82,7 @@ function nameOf(item: unknown): string | null {
 }
 
 const placesOfG =
-  /^(G|codata|regressions\[.*\]\.(with|without)\.G|methods\[.*\]\.(G|difference))$|^monteCarlo\.(G_mean|G_u|interval95\[\d\])$|\.contribution$/;
+  /^(G|codata|regressions\[.*\]\.(with|without)\.G|methods\[.*\]\.(G|difference))$|^monteCarlo\.(G_mean|G_u|interval95(_u)?\[\d\])$|\.contribution$/;
 
 function unitOfPath(path: string): string {
   if (placesOfG.test(path)) return UNIT_OF_G;

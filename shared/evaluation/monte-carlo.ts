@@ -32,6 +32,8 @@ export interface MonteCarloResult {
   G_u: number | null;
   /** Null from fewer trials than tell its ends. */
   interval95: [number, number] | null;
+  /** Standard uncertainty of its ends, from the number of trials. */
+  interval95_u: [number, number] | null;
 }
 
 const seed = 20220;
@@ -69,12 +71,18 @@ export function summarised(values: Float64Array, inputs: readonly Pick<TrialInpu
   const squares = values.reduce((sum, value) => sum + (value - mean) ** 2, 0);
   values.sort();
   const at = (share: number) => values[Math.min(trials - 1, Math.max(0, Math.round(share * trials - 0.5)))] as number;
+  // How many of the trials lie below an end is binomial, whatever their distribution is.
+  const uAt = (share: number) => {
+    const width = Math.sqrt((share * (1 - share)) / trials);
+    return (at(share + width) - at(share - width)) / 2;
+  };
   const leastNu = Math.min(...inputs.map(({ law, u }) => (law.kind === 't' && u > 0 ? law.nu : Infinity)));
   return {
     trials,
     G_mean: leastNu > 1 ? mean : null,
     G_u: leastNu > 2 && trials > 1 ? Math.sqrt(squares / (trials - 1)) : null,
     interval95: trials < fewestForInterval ? null : [at(0.025), at(0.975)],
+    interval95_u: trials < fewestForInterval ? null : [uAt(0.025), uAt(0.975)],
   };
 }
 

@@ -119,6 +119,8 @@ export const evaluationResultSchema = z.strictObject({
       G_mean: z.number().nullable(),
       G_u: z.number().nullable(),
       interval95: z.tuple([z.number(), z.number()]).nullable(),
+      /** Of the ends of the interval, from the number of trials; absent from results of earlier versions. */
+      interval95_u: z.tuple([z.number(), z.number()]).nullable().optional(),
     })
     .nullable(),
   /** Of the modulation method alone: whole turns that were looked at, and half the swing at twice the turntable's angle. */

@@ -20,6 +20,8 @@ interface Scattered {
   u: number;
   /** Standard deviation between the values beside their u; 0 where these explain the scatter. */
   scatter: number;
+  /** Its standard uncertainty, from the information that normal values would give (half of Σ w² about the variance); null for no scatter. */
+  scatterU: number | null;
 }
 
 /** Both ways to combine values that may scatter more than they say; null for fewer than two, or where one has no u. */
@@ -44,7 +46,9 @@ export function momentVariance(values: readonly Stated[]): number {
 /** Mean of values that have a variance of their own beside their u. */
 export function withScatter(values: readonly Stated[], variance: number): Scattered {
   const { mean, u } = weightedMean(values.map((one) => ({ value: one.value, u: Math.sqrt(one.u ** 2 + variance) })));
-  return { mean, u, scatter: Math.sqrt(variance) };
+  const information = values.reduce((sum, one) => sum + (one.u ** 2 + variance) ** -2 / 2, 0);
+  const scatter = Math.sqrt(variance);
+  return { mean, u, scatter, scatterU: scatter === 0 ? null : 1 / (2 * scatter * Math.sqrt(information)) };
 }
 
 /** χ² falls with the variance added, ever more slowly: Newton's rule from below does not pass the root. */

@@ -1,3 +1,4 @@
+import { monteCarloWords } from '@/shared/evaluation/monte-carlo-words';
 import { agreementOf, changeWords, enWords, regressionWords, registeredWords } from '@/components/evaluation/evaluation-words';
 import { placeOfWarning } from '@/components/evaluation/warning-places';
 import { unitOfInput } from '@/shared/evaluation/input-words';
@@ -68,4 +69,15 @@ test('a warning leads to where it can be looked at', () => {
   expect(placeOfWarning('sign', run)).toMatchObject({ href: '/rigs/g1/stations' });
   expect(placeOfWarning('not-alternating', run)).toMatchObject({ dwell: true });
   expect(placeOfWarning('no-hashes', run)).toBeNull();
+});
+
+test('the ends of a Monte Carlo interval have the u that the number of trials leaves; those of results kept before have as many digits as u', () => {
+  const monteCarlo = { trials: 100_000, G_mean: 6.6743e-11, G_u: 1.5e-13, interval95: [6.6449e-11, 6.7037e-11] as [number, number] };
+  const words = (interval95_u?: [number, number]) =>
+    (monteCarloWords({ monteCarlo: interval95_u === undefined ? monteCarlo : { ...monteCarlo, interval95_u }, G: null }) ?? '').replaceAll(
+      /\s/gu,
+      ' ',
+    );
+  expect(words([1.3e-15, 1.3e-15])).toContain('95 % interval from 6.644 90(13) × 10⁻¹¹ m³ kg⁻¹ s⁻² to 6.703 70(13) × 10⁻¹¹ m³ kg⁻¹ s⁻²');
+  expect(words()).toContain('95 % interval from 6.645 × 10⁻¹¹ m³ kg⁻¹ s⁻² to 6.704 × 10⁻¹¹ m³ kg⁻¹ s⁻²');
 });

@@ -1,7 +1,9 @@
 import { fireEvent, render, screen, within } from '@testing-library/react';
-import { beyondAxes, residualRms, sharedAxes } from '@/components/charts';
+import { beyondAxes, sharedAxes } from '@/components/charts';
 import { SideBySidePanel } from '@/components/evaluation/side-by-side-panel';
+import { residualRms } from '@/shared/evaluation/residual-rms';
 import type { FitCurve } from '@/shared/evaluation/result';
+import { normalDeviates } from '../../support/lcg';
 
 const dwell = (seq: number, station: string, restUrad: number[]): FitCurve => ({
   ...{
@@ -27,8 +29,8 @@ test('every dwell stands on the axes of the longest and of the greatest residual
   expect(sharedAxes(curves.slice(0, 2)).reachRad).toBeCloseTo(2e-6, 12);
   expect(sharedAxes([curves[0] as FitCurve, dwell(5, 'near', [4, -5, 2])]).reachRad).toBeCloseTo(5e-6, 12);
   // 3, −3, 3, −3 about zero: 3 by definition; one of −12 among five: 12/√5.
-  expect(residualRms(curves[0] as FitCurve)).toBeCloseTo(3e-6, 12);
-  expect(residualRms(curves[2] as FitCurve)).toBeCloseTo(12e-6 / Math.sqrt(5), 12);
+  expect(residualRms(curves[0] as FitCurve)).toEqual({ value: expect.closeTo(3e-6, 12) as number, u: null });
+  expect(residualRms(curves[2] as FitCurve).value).toBeCloseTo(12e-6 / Math.sqrt(5), 12);
 });
 
 test.each([
@@ -67,15 +69,32 @@ test('near stands beside far, each dwell says its residual with its unit, and a 
     within(screen.getByRole('list', { name }))
       .getAllByRole('button')
       .map((button) => plain(button.getAttribute('aria-label')));
-  expect(seqs('Dwells: near')).toEqual(['Dwell 6 at near, residual 1.0 µrad rms: show its fit']);
+  expect(seqs('Dwells: near')).toEqual(['Dwell 6 at near, residual rms 1.000 µrad, u not known: show its fit']);
   expect(seqs('Dwells: far')).toEqual([
-    'Dwell 4 at far, residual 3.0 µrad rms: show its fit',
-    'Dwell 8 at far, residual 5.4 µrad rms, 1 beyond, to −12 µrad: show its fit',
+    'Dwell 4 at far, residual rms 3.000 µrad, u not known: show its fit',
+    'Dwell 8 at far, residual rms 5.4(3.8) µrad, 1 beyond, to −12 µrad: show its fit',
   ]);
   expect(seqs('Dwells: elsewhere')).toHaveLength(1);
   expect(screen.getByRole('button', { pressed: true }).getAttribute('aria-label')).toContain('Dwell 6');
   fireEvent.click(screen.getByRole('button', { name: /^Dwell 8/ }));
   expect(onSelect).toHaveBeenCalledWith(8);
+});
+
+test('the u of a residual rms is what the scatter of many such dwells shows', () => {
+  const normal = normalDeviates(23);
+  // A straight line and two amplitudes are as good as taken off where the noise has none: 4 of 60 in the sum of squares.
+  const found = Array.from({ length: 2000 }, () => residualRms(dwell(1, 'near', Array.from({ length: 56 }, normal))).value);
+  const mean = found.reduce((sum, value) => sum + value, 0) / 2000;
+  const scatter = Math.sqrt(found.reduce((sum, value) => sum + (value - mean) ** 2, 0) / 1999);
+  const { value, u } = residualRms(
+    dwell(
+      1,
+      'near',
+      Array.from({ length: 60 }, (_, k) => (k % 2 === 0 ? 1 : -1)),
+    ),
+  );
+  expect((u as number) / value / (scatter / mean)).toBeGreaterThan(0.93);
+  expect((u as number) / value / (scatter / mean)).toBeLessThan(1.07);
 });
 
 test('one dwell has nothing to stand beside', () => {

@@ -19,10 +19,10 @@ test('three nights that scatter four times as much as they say come with both wa
     [1e-3, 1e-6],
     [0.996e-3, 1e-6],
   ]);
-  // Means of equal u: 1/√3 µrad four times as great; a scatter of √15 µrad beside 1 µrad gives the same.
+  // Means of equal u: 1/√3 µrad four times as great; a scatter of √15 µrad beside 1 µrad gives the same, and three nights tell it poorly.
   expect(text).toContain('1.0000(23) mrad');
   expect(text).toContain('3 nights together, which scatter 4.0 times as much as their u say');
-  expect(text).toContain('if each night has 3.9 µrad of its own');
+  expect(text).toContain('if each night has 3.9(1.7) µrad of its own');
 });
 
 test('nights that agree are said to, and two nights are not combined', () => {

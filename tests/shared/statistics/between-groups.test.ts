@@ -1,6 +1,7 @@
 import { combined, momentVariance, withScatter, type Combined } from '@/shared/statistics/between-groups';
 import { weightedMean } from '@/shared/statistics/weighted-mean';
 import { relativeDifference } from '../../support/check-data';
+import { normalDeviates } from '../../support/lcg';
 
 /** Values that scatter more than their u say (physics.md L4): an independent implementation. */
 
@@ -66,9 +67,21 @@ describe.each([
 
 test('values that agree better than they say have no scatter of their own, and neither u grows', () => {
   const found = combined(paired([1, 1.001, 0.999], [0.1, 0.1, 0.1])) as Combined;
-  expect(found.own).toMatchObject({ mean: found.common.mean, scatter: 0 });
+  expect(found.own).toMatchObject({ mean: found.common.mean, scatter: 0, scatterU: null });
   expect(found.own.u).toBeCloseTo(found.common.u, 15);
   expect(found.widenedU).toBe(found.common.u);
+});
+
+test('the u of the scatter is what many such sets show', () => {
+  const normal = normalDeviates(5);
+  const found = Array.from(
+    { length: 400 },
+    () => combined(Array.from({ length: 40 }, () => ({ value: Math.SQRT2 * normal(), u: 1 }))) as Combined,
+  );
+  const [scatters, us] = [found.map(({ own }) => own.scatter), found.map(({ own }) => own.scatterU ?? 0)];
+  const mean = (values: readonly number[]) => values.reduce((sum, value) => sum + value, 0) / values.length;
+  const spread = Math.sqrt(mean(scatters.map((value) => (value - mean(scatters)) ** 2)));
+  expect(relativeDifference(mean(us), spread)).toBeLessThan(0.15);
 });
 
 test('one value, or one without a u, is not combined', () => {

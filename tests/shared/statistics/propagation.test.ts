@@ -48,6 +48,33 @@ test('mass calibration (9.3): the linear budget gives 0.0539 mg, the distributio
   expect(found.interval95[1]).toBeCloseTo(1.383, 2);
 });
 
+test('the ends of the interval have the u that other trials show', () => {
+  const ends = Array.from({ length: 60 }, (_, seed) => {
+    const [source] = seededStreams(seed + 1, 1) as [GaussianSource];
+    const { interval95, interval95_u } = summarised(
+      Float64Array.from({ length: 4000 }, () => drawn(normal, source)),
+      [],
+    );
+    return { end: interval95?.[1] ?? NaN, u: interval95_u?.[1] ?? NaN };
+  });
+  const mean = (of: (one: (typeof ends)[number]) => number) => ends.reduce((sum, one) => sum + of(one), 0) / ends.length;
+  const middle = mean(({ end }) => end);
+  const spread = Math.sqrt(mean(({ end }) => (end - middle) ** 2));
+  // √(p(1 − p)/M) over the density at 1.96.
+  expect(
+    relativeDifference(
+      mean(({ u }) => u),
+      Math.sqrt((0.025 * 0.975) / 4000) / 0.0584451,
+    ),
+  ).toBeLessThan(0.05);
+  expect(
+    relativeDifference(
+      mean(({ u }) => u),
+      spread,
+    ),
+  ).toBeLessThan(0.25);
+});
+
 test.each([5, 12.5])('a mean from few repetitions has the spread √(ν/(ν − 2)) of Student, ν %d', (nu) => {
   expect(relativeDifference(propagated(11, (draw) => draw({ kind: 't', nu })).G_u, Math.sqrt(nu / (nu - 2)))).toBeLessThan(0.02);
 });
@@ -82,5 +109,5 @@ test('an input of so few degrees of freedom that its distribution has no standar
 });
 
 test('one trial scatters not at all, and a few tell no interval', () => {
-  expect(summarised(Float64Array.of(3), [])).toEqual({ trials: 1, G_mean: 3, G_u: null, interval95: null });
+  expect(summarised(Float64Array.of(3), [])).toEqual({ trials: 1, G_mean: 3, G_u: null, interval95: null, interval95_u: null });
 });
