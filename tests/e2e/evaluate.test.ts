@@ -63,7 +63,7 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
 
   chapter('every dwell shows its fit and what the fit leaves', async () => {
     expect(await hand.page.getByTestId('dwell-row').count()).toBe(2 * pairs);
-    await hand.hears('fit-plot', /^Dwell 4 at far: fit to \d+ bins over 13 min \d+ s, residual [\d.]+ µrad rms/);
+    await hand.hears('fit-plot', /^Dwell 4 at far: fit to \d+ bins over 13 min \d+ s, residual rms [\d.]+\([\d.]+\)\sµrad\.$/);
     await hand.tapsOn('Next dwell');
     await hand.hears('fit-plot', /^Dwell 6 at near/);
     expect(await hand.reads('figures')).toMatch(/near − far, \d+ reversal.*damped period.*decay time/);
@@ -78,6 +78,14 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await hand.shoots('side-by-side');
     await hand.page.getByRole('button', { name: /^Dwell 4 at far/ }).press('Enter');
     await hand.hears('fit-plot', /^Dwell 4 at far/);
+  });
+
+  chapter('the residuals are averaged over longer and longer times, by the deviation that is chosen', async () => {
+    expect(await hand.reads('allan-words')).toMatch(/\(\d+\) µrad at/);
+    await hand.chooses('allan-kind', 'hadamard');
+    await hand.sees('A straight drift does not show in it');
+    await hand.at('allan-kind').scrollIntoViewIfNeeded();
+    await hand.shoots('allan');
   });
 
   chapter('the budget names each input with its share, and the chain is whole', async () => {
