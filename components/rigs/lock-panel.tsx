@@ -4,9 +4,11 @@ import { useLab, useLabMutation, useMay, useSession, wordsOf } from '@/component
 import { MayNote } from '@/components/people/may-note';
 import { Body, Button, Check, Field, Icon, Label, Panel, ProblemNotice, Section, Sheet } from '@/components/ui';
 import { type RigView } from '@/shared/contracts/rigs';
-import { liftLock, overrideLock, setLock, type LockView } from '@/shared/contracts/standing';
-import { formatDayAndClock } from '@/shared/lib/format-time';
+import { Stage } from '@/components/runs/intervention-stages';
+import { liftLock, overrideLock, type LockView } from '@/shared/contracts/standing';
+import { formatClock, formatDayAndClock } from '@/shared/lib/format-time';
 import { VirtualInputsPanel } from './arming-progress';
+import { lockSentence, useSetLock, type LockOnItsWay } from './set-lock';
 import { useRefreshRigs } from './use-rig';
 
 /** Large on every screen from which the rig could be set in motion: somebody's hands are in it. */
@@ -32,26 +34,25 @@ export function lockWords(locks: readonly Pick<LockView, 'name'>[]): string | nu
 }
 
 /** One's own lock is set with one tap, in the safe direction, and lifted at the rig by the one who set it. */
-export function LockPanel({ rig }: { rig: RigView }) {
+export function LockPanel({ rig, readAtMs }: { rig: RigView; readAtMs: number }) {
   const { state } = useSession();
   const userId = state.kind === 'signed-in' ? state.me.user.id : null;
-  const mayLock = useMay('lock.own').ok;
   const mayOverride = useMay('lock.override').ok;
-  const refresh = useRefreshRigs();
-  const set = useLabMutation(setLock, refresh);
+  const setting = useSetLock(rig.id);
   const [leaving, setLeaving] = useState<{ lock: LockView; asOwner: boolean } | null>(null);
-  const own = rig.locks.find((lock) => lock.userId === userId);
+  const locks = locksKnown(rig.locks, setting.state, readAtMs);
+  const own = locks.find((lock) => lock.userId === userId);
   return (
     <Section title="Personal lock">
-      <LockedNotice words={lockWords(rig.locks)} />
+      <LockedNotice words={lockWords(locks)} />
       <Panel className="gap-3">
-        {rig.locks.length === 0 ? (
+        {locks.length === 0 ? (
           <Body tone="dim">
             Nobody’s hands are in the rig. A personal lock brings what moves to rest, ends the arm, and keeps everybody from setting the rig
             in motion until whoever set it lifts it.
           </Body>
         ) : (
-          rig.locks.map((lock) => (
+          locks.map((lock) => (
             <LockRow
               key={lock.id}
               lock={lock}
@@ -62,21 +63,68 @@ export function LockPanel({ rig }: { rig: RigView }) {
           ))
         )}
         <MayNote act="lock.own" />
-        {mayLock && own === undefined ? (
-          <Button
-            kind="danger"
-            size="action"
-            icon="hold"
-            label="My hands are in the rig"
-            busy={set.isPending}
-            onPress={() => set.mutate({ params: { rigId: rig.id }, body: {} })}
-            testID="set-lock"
-          />
-        ) : null}
-        {set.isError ? <ProblemNotice title="The lock was not set: use the switch at the rig" {...wordsOf(set.error)} /> : null}
+        <SetLock {...setting} isSet={own !== undefined} />
       </Panel>
       {leaving === null ? null : <LiftSheet rig={rig} {...leaving} onClose={() => setLeaving(null)} />}
     </Section>
+  );
+}
+
+/** An answer that left the server before the lock was set may be this old, ms. */
+const overtakenMs = 3000;
+
+/** The locks of the rig as it was read, and one's own that the server has answered since. */
+function locksKnown(read: readonly LockView[], own: LockOnItsWay, readAtMs: number): readonly LockView[] {
+  if (own.kind !== 'set' || readAtMs > own.answeredAtMs + overtakenMs || read.some(({ id }) => id === own.lock.id)) return read;
+  return [...read, own.lock];
+}
+
+/** To set a lock on a rig of which nothing else may be known here: neither needs what the page could not read. */
+export function BlindLock({ rigId }: { rigId: string }) {
+  const setting = useSetLock(rigId);
+  const isSet = setting.state.kind === 'set';
+  return (
+    <Panel className="gap-3">
+      {setting.state.kind === 'set' ? <LockedNotice words={lockWords([setting.state.lock])} /> : null}
+      <SetLock {...setting} isSet={isSet} />
+    </Panel>
+  );
+}
+
+interface SetLockProps {
+  state: LockOnItsWay;
+  tap: () => void;
+  isSet: boolean;
+}
+
+/** The button, and how far the lock has come: `locked` is said only when the server has it. */
+function SetLock({ state, tap, isSet }: SetLockProps) {
+  const { timeZone } = useLab();
+  const mayLock = useMay('lock.own').ok;
+  if (!mayLock) return null;
+  const sentence = lockSentence(state);
+  const isOnItsWay = state.kind === 'set' ? isSet : state.kind !== 'idle';
+  return (
+    <>
+      {isOnItsWay ? (
+        <View className="flex-row gap-2" testID="lock-stages">
+          <Stage state="done" title="Sent" detail="" />
+          <Stage
+            state={state.kind === 'set' ? 'done' : state.kind === 'sending' ? 'now' : 'failed'}
+            title="Server has it"
+            detail={state.kind === 'set' ? formatClock(Date.parse(state.lock.since), { timeZone }) : state.kind === 'sending' ? '…' : 'no'}
+          />
+        </View>
+      ) : null}
+      <View role="alert" testID="lock-sentence">
+        {sentence === '' ? null : (
+          <Body strong tone="danger">
+            {sentence}
+          </Body>
+        )}
+      </View>
+      {isSet ? null : <Button kind="danger" size="action" icon="hold" label="My hands are in the rig" onPress={tap} testID="set-lock" />}
+    </>
   );
 }
 

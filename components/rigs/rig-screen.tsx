@@ -1,7 +1,7 @@
 import { useLocalSearchParams, useRouter, type Href } from 'expo-router';
 import { useState } from 'react';
 import { View } from 'react-native';
-import { useLab, useMay, wordsOf } from '@/components/api';
+import { isProblem, useLab, useMay, wordsOf } from '@/components/api';
 import { CamerasPanel } from '@/components/cameras/cameras-panel';
 import { PlanView } from '@/components/charts/plan-view';
 import { Body, Button, Chip, Label, Loading, Panel, ProblemNotice, Screen, Section, useWide } from '@/components/ui';
@@ -13,7 +13,7 @@ import { DevicesPanel } from './devices-panel';
 import { linkState } from './link-words';
 import { LinkPanel } from './link-panel';
 import { LiveFacts } from './live-facts';
-import { LockPanel } from './lock-panel';
+import { BlindLock, LockPanel } from './lock-panel';
 import { MassSets } from './mass-sets';
 import { PositionFacts } from './position-facts';
 import { RigDocumentSection } from './rig-document-section';
@@ -29,11 +29,14 @@ export function RigScreen() {
     return (
       <Screen title="Rig" back={{ href: '/rigs', label: 'rigs' }}>
         {query.isError ? (
-          <ProblemNotice
-            title="The rig could not be read"
-            {...wordsOf(query.error)}
-            action={{ label: 'Try again', onPress: () => void query.refetch() }}
-          />
+          <>
+            <ProblemNotice
+              title="The rig could not be read"
+              {...wordsOf(query.error)}
+              action={{ label: 'Try again', onPress: () => void query.refetch() }}
+            />
+            {isProblem(query.error, 'not-found') ? null : <BlindLock rigId={rigId} />}
+          </>
         ) : (
           <Loading label="Loading the rig" />
         )}
@@ -66,7 +69,7 @@ export function RigScreen() {
       <LivePanel rig={rig} />
       <PositionPanel rig={rig} />
       <ArmPanel rig={rig} />
-      <LockPanel rig={rig} />
+      <LockPanel rig={rig} readAtMs={query.dataUpdatedAt} />
       <LinkPanel rig={rig} />
       <CamerasPanel rig={rig} />
       <DevicesPanel rig={rig} />

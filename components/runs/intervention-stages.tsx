@@ -57,7 +57,8 @@ export function InterventionStages({ stages, timeZone }: StagesProps) {
   );
 }
 
-function Stage({ state, title, detail }: { state: StageState; title: string; detail: string }) {
+/** One stage on the way of an act: its mark, its name, and when it was reached. */
+export function Stage({ state, title, detail }: { state: StageState; title: string; detail: string }) {
   const mark = marks[state];
   return (
     <View

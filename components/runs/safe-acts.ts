@@ -28,16 +28,24 @@ export type SafePost = (
   input: { body: { tappedAt: string }; idempotencyKey: string; keepalive: true; signal: AbortSignal },
 ) => Promise<{ data: { serverAt: string } }>;
 
-async function sendOnce(post: SafePost, { act, key, tappedAt }: Tap, signal: AbortSignal): Promise<Attempt<Outcome>> {
+/** One attempt: what it was answered, a refusal included, or that this says nothing. */
+export async function attemptOf<T>(send: () => Promise<T>, refused: (detail: string) => T): Promise<Attempt<T>> {
   try {
-    const { data } = await post(act, { body: { tappedAt }, idempotencyKey: key, keepalive: true, signal });
-    return { kind: 'answer', value: { kind: 'accepted', serverAtMs: Date.parse(data.serverAt) } };
+    return { kind: 'answer', value: await send() };
   } catch (error) {
-    if (error instanceof ApiProblem && !inconclusive.has(error.code))
-      return { kind: 'answer', value: { kind: 'refused', detail: error.detail } };
+    if (error instanceof ApiProblem && !inconclusive.has(error.code)) return { kind: 'answer', value: refused(error.detail) };
     return { kind: 'none' };
   }
 }
+
+const sendOnce = (post: SafePost, { act, key, tappedAt }: Tap, signal: AbortSignal): Promise<Attempt<Outcome>> =>
+  attemptOf<Outcome>(
+    async () => {
+      const { data } = await post(act, { body: { tappedAt }, idempotencyKey: key, keepalive: true, signal });
+      return { kind: 'accepted', serverAtMs: Date.parse(data.serverAt) };
+    },
+    (detail) => ({ kind: 'refused', detail }),
+  );
 
 /** Sends safe acts of a run. */
 export const postOfRun =

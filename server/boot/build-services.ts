@@ -105,7 +105,7 @@ export function buildServices(parts: BuildParts): { services: Services; inside: 
     ...{ idempotency: createIdempotency(database.db, nowUtcMs), secrets: createSecretBox(config) },
     ...buildTelling(parts, () => services.config.port),
     activeRuns: new ActiveRuns({ supervisor, onChange: told.runChanged }),
-    watchedLabs: () => [...new Set([...services.activeRuns.labIds(), ...guided.labIds()])],
+    watchedLabs: () => leases.labIds(),
     tasks: overrides.tasks ?? (workers as NonNullable<typeof workers>),
     background: (work, what) => background.add(work, what),
     takenUp: takenUp.promise,

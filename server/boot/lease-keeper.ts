@@ -83,6 +83,11 @@ export class LeaseKeeper {
     return this.epochs.has(rigId);
   }
 
+  /** Labs whose rigs this process drives: their members must be able to hold, stop and lock without the database. */
+  labIds(): string[] {
+    return [...new Set([...this.epochs.values()].map(({ labId }) => labId))];
+  }
+
   /** Whether this process drives the rig or waits for it. */
   knows(rigId: string): boolean {
     return this.epochs.has(rigId) || this.waitedFor.has(rigId);

@@ -120,11 +120,6 @@ export class GuidedMoves {
       : `${session.by.name} is at the guided first move of ${session.rig.name}. It has to be ended on the link page first.`;
   }
 
-  /** Labs in which somebody guides a rig: their members must be able to hold and stop without the database. */
-  labIds(): string[] {
-    return [...new Set([...this.sessions.values()].map(({ rig }) => rig.labId))];
-  }
-
   isPresent(rigId: string): boolean {
     const session = this.sessions.get(rigId);
     return session !== undefined && this.parts.clock.monotonicMs() - session.seenMs <= ABSENT_MS;

@@ -29,8 +29,8 @@ const emptyCopy = (): Copy => ({ sessions: new Map(), users: new Map(), membersh
 
 /**
  * Who is signed in and what they are in a lab. Ordinary routes ask the database each time, so that a changed role
- * holds at once. For hold and stop a copy of everybody in the labs with an active run is kept in memory: these two
- * must work when the database does not.
+ * holds at once. For hold, stop and personal locks a copy of everybody in the labs whose rigs this process drives is kept in
+ * memory: these must work when the database does not.
  */
 export class AccessDirectory {
   private copy = emptyCopy();
@@ -77,12 +77,12 @@ export class AccessDirectory {
     return labIds.map((labId) => this.remembered(token, labId)).find((found) => found !== null)?.me ?? null;
   }
 
-  /** Labs with an active run of which the account is a member, out of memory alone. */
+  /** Labs with a rig of this process of which the account is a member, out of memory alone. */
   rememberedMemberships(userId: string): Membership[] {
     return [...this.copy.memberships].flatMap(([key, membership]) => (key.startsWith(`${userId} `) ? [membership] : []));
   }
 
-  /** Takes a fresh copy for the labs with an active run; keeps the old one when the database does not answer. */
+  /** Takes a fresh copy for these labs; keeps the old one when the database does not answer. */
   async refresh(labIds: readonly string[]): Promise<void> {
     this.watched = new Set(labIds);
     if (labIds.length === 0) {

@@ -52,11 +52,6 @@ export class ActiveRuns {
     return [...this.byId.values()];
   }
 
-  /** Labs with a run that this process drives. */
-  labIds(): string[] {
-    return [...new Set([...this.byId.values()].map((run) => run.labId))];
-  }
-
   private changed(driver: RunDriver, change: RunChange): void {
     const run = this.byId.get(driver.runId);
     if (run === undefined) return;

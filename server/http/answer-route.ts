@@ -12,13 +12,13 @@ import type { AtTheRig, Membership, MountedRoute, RouteContext, SignedIn } from 
 import type { Services } from './services';
 import { clearSessionCookie, readSessionToken, setSessionCookie } from './session-cookie';
 
-/** Hold and stop: no database may stand between a member and these. */
-export const isIntervention = (contract: RouteContract) => contract.access === 'run.hold' || contract.access === 'run.stop';
+/** Hold, stop and one's own personal lock: no database may stand between a member and these. */
+export const isIntervention = ({ access, name }: RouteContract) => access === 'run.hold' || access === 'run.stop' || name === 'setLock';
 
 export interface RouteParts {
   services: Services;
   readJson: RequestHandler;
-  /** Keys of hold and stop. */
+  /** Keys of hold, stop and personal locks. */
   interventionKeys: IdempotencyPort;
 }
 

@@ -69,8 +69,8 @@ export function rethrowKeptProblem(answer: IdempotencyAnswer): void {
 }
 
 /**
- * Keys of hold and stop, in memory: these must not wait for a table that may be unreachable. A repeat that comes to another process is known
- * to the run (`actedOn` of its snapshot).
+ * Keys of hold, stop and personal locks, in memory: these must not wait for a table that may be unreachable. A repeat that comes to another
+ * process is known to the run (`actedOn` of its snapshot), and a person has one lock on a rig however often it is set.
  */
 export class MemoryIdempotency implements IdempotencyPort {
   private readonly kept = new Map<string, { fingerprint: string; answer: IdempotencyAnswer | null }>();

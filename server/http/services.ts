@@ -88,7 +88,7 @@ export interface Services {
   live: LiveHub;
   lines: LineHub;
   tasks: HeavyTasks;
-  /** Labs in which something moves or may: their members must be able to hold and stop without the database. */
+  /** Labs whose rigs this process drives: their members must be able to hold, stop and lock without the database. */
   watchedLabs(): string[];
   /** Lets something go on after the answer; a failure is logged, and `idle` waits for it. */
   background(work: Promise<unknown>, what: string): void;
