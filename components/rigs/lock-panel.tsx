@@ -48,8 +48,8 @@ export function LockPanel({ rig, readAtMs }: { rig: RigView; readAtMs: number })
       <Panel className="gap-3">
         {locks.length === 0 ? (
           <Body tone="dim">
-            Nobody’s hands are in the rig. A personal lock brings what moves to rest, ends the arm, and keeps everybody from setting the rig
-            in motion until whoever set it lifts it.
+            {setting.state.kind === 'idle' || setting.state.kind === 'set' ? 'Nobody’s hands are in the rig. ' : ''}A personal lock brings
+            what moves to rest, ends the arm, and keeps everybody from setting the rig in motion until whoever set it lifts it.
           </Body>
         ) : (
           locks.map((lock) => (
