@@ -4,6 +4,7 @@ import { waitOf, type Otherwise } from '@/shared/protocol/wait';
 import type { Instant } from '../interfaces/clock';
 import type { Draft } from './draft';
 import type { ActiveStep, Waiting } from './run-context';
+import { armRefusal } from './arm-refusal';
 import { newRow, stationOf } from './rows';
 import { LOOK_MS } from './timing';
 
@@ -126,7 +127,7 @@ export function confirmRefusal(draft: Draft): string | null {
   if (!known.supplyPresent) return 'The motor supply is off: switch it on at the rig.';
   if (start.simulated === null && arm === null)
     return 'The prompt let people in, so the rig is disarmed. Arm it again at the rig, then confirm.';
-  return null;
+  return armRefusal(draft, start.simulated === null ? arm : 'simulated', null);
 }
 
 export function confirmPrompt(draft: Draft): void {

@@ -1,11 +1,11 @@
 import type { Instant } from '../interfaces/clock';
 import { startRun } from './beginning';
+import { armRefusal, type ArmGiven } from './arm-refusal';
 import type { Draft } from './draft';
 import type { ActiveStep, InterruptionCause, KnownController, RunEvent } from './run-context';
 import { finishMotion, reachedTarget, takeAhead, untoldEdge } from './motions';
 import { finishedWords, heedFinishing } from './finishing';
 import { slipRefusal } from './position';
-import { predictEndUtcMs } from './predicted-end';
 import { awaits, beginAwaiting } from './awaiting';
 import { toleranceDeg } from './rows';
 import { lostWords, noteWound } from './windings';
@@ -114,8 +114,6 @@ export function returnRefusal(draft: Draft): string | null {
   return motionRefusal(draft, draft.start.simulated === null ? context.arm : 'simulated', context.armVoid);
 }
 
-type ArmGiven = { name: string; untilUtcMs: number } | 'simulated' | null;
-
 /** What stands between a run at rest and its next motion, in a sentence; null where nothing does. */
 export function motionRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string | null {
   const { context } = draft;
@@ -134,15 +132,6 @@ function elsewhereRefusal(draft: Draft, known: KnownController): string | null {
   if (step === null || step.motion !== null || known.angleDeg === null) return null;
   if (Math.abs(known.angleDeg - moment.angleDeg) <= toleranceDeg(draft)) return null;
   return `The sources stand at ${known.angleDeg.toFixed(2)} deg, not at ${moment.angleDeg.toFixed(2)} deg where this step measures. Stop this run and start a new one.`;
-}
-
-function armRefusal(draft: Draft, arm: ArmGiven, armVoid: string | null): string | null {
-  if (arm === 'simulated') return null;
-  if (arm === null || armVoid !== null)
-    return `The rig is not armed${armVoid === null ? '' : `: ${armVoid}`}. A named person has to arm it on site first.`;
-  const endUtcMs = draft.predictedEndUtcMs ?? predictEndUtcMs(draft.start, draft.context, { nowUtcMs: draft.nowUtcMs });
-  if (arm.untilUtcMs > endUtcMs) return null;
-  return `The arm of ${arm.name} ends at ${iso(arm.untilUtcMs)}, before the predicted finish at ${iso(endUtcMs)}. Arm the rig until after that.`;
 }
 
 /** The protocol lets the interrupted run go on: what was standing goes on standing, a broken move is finished first. */

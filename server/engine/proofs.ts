@@ -22,6 +22,10 @@ export function runProof(draft: Draft, item: PlannedItem): 'holding' | 'stopping
   context.step = null;
   if (blind) {
     draft.log('proof-not-possible', { seq: row.seq, path: row.path, why: 'no deflection came in while the dwells went on' }, moment);
+    draft.notify(
+      'proved',
+      `The proof of step ${item.path} says nothing about the night: no deflection came in while the dwells went on. The run goes on without it.`,
+    );
     return null;
   }
   draft.log('proof', { seq: row.seq, path: row.path, sound, otherwise, tests: items }, moment);

@@ -27,6 +27,9 @@ export interface Caller {
   services: Services;
 }
 
+/** Throws where a tap no longer counts. */
+export type StillCounts = () => void;
+
 export interface Begin {
   rig: RigRecord;
   protocolId: string;
@@ -46,8 +49,7 @@ export interface Claim {
 const longestTapMs = 5_000;
 
 /** A command that sets masses in motion acts on a fresh tap only: a delayed one may come when somebody has walked in. */
-export function assertFreshTap(tappedAt: string | undefined, nowUtcMs: number, act: string): void {
-  if (tappedAt === undefined) return;
+export function assertFreshTap(tappedAt: string, nowUtcMs: number, act: string): void {
   const ageMs = nowUtcMs - Date.parse(tappedAt);
   if (Math.abs(ageMs) <= longestTapMs) return;
   const words = ageMs > 0 ? `was made ${String(Math.round(ageMs / 1000))} s ago` : "lies in the future by the server's clock";
@@ -96,7 +98,7 @@ function refusalOfChecks({ checks }: StartReport): ProblemError | null {
 }
 
 /** Starts a run: checks, the row in the database, then the engine. */
-export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSetRecord; claim?: Claim }): Promise<RunRecord> {
+export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSetRecord; claim?: Claim; stillCounts?: StillCounts }): Promise<RunRecord> {
   const { services } = caller;
   const document = { ...begin.rig.document, sources: begin.massSet.sources };
   const refusal = refusalOf(checkProtocol(begin.protocol, document));
@@ -126,7 +128,9 @@ export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSet
       massSetId: begin.massSet.id,
       finishUtcMs: report.finishUtcMs,
       claim: begin.claim,
+      stillCounts: begin.stillCounts,
     });
+    assertStillCounts(services, start, begin.stillCounts);
     services.startSeeds.used(run.rigId);
     drive(services, run);
     return run;
@@ -146,7 +150,7 @@ export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSet
 async function storeStart(
   caller: Caller,
   start: RunStart,
-  with_: { begin: Begin; massSetId: string; finishUtcMs: number; claim: Claim | undefined },
+  with_: { begin: Begin; massSetId: string; finishUtcMs: number; claim: Claim | undefined; stillCounts: StillCounts | undefined },
 ): Promise<RunRecord> {
   const { services } = caller;
   const { db } = services.database;
@@ -171,7 +175,7 @@ async function storeStart(
       predictedEndUtcMs: with_.finishUtcMs,
     };
     await with_.claim?.take(tx);
-    if (await insertRun(tx, row)) return;
+    if (await insertRun(tx, row)) return with_.stillCounts?.();
     const other = (await activeRuns(db, start.labId)).get(start.rigId);
     throw new ProblemError(
       'rig-busy',
@@ -183,9 +187,20 @@ async function storeStart(
   return run;
 }
 
+/** What took so long to be stored that the tap no longer counts moves nothing any more. */
+function assertStillCounts(services: Services, start: RunStart, stillCounts: StillCounts | undefined): void {
+  try {
+    stillCounts?.();
+  } catch (error) {
+    endUnbegun(services, start, 'It took so long to store the run that the tap to start no longer counted, so it was not begun. Nothing was moved.');
+    throw error;
+  }
+}
+
+const awayWords = 'The database went away while the run was started, so it was not begun. Nothing was moved.';
+
 /** Where the answer of the database was lost the run may be there all the same, which nothing drives: it must not keep its rig. */
-function endUnbegun(services: Services, { labId, runId }: RunStart): void {
-  const why = 'The database went away while the run was started, so it was not begun. Nothing was moved.';
+function endUnbegun(services: Services, { labId, runId }: RunStart, why = awayWords): void {
   const end = () => markRunFailed(services.database.db, { labId, id: runId }, { why, nowUtcMs: services.clock.utcMs() });
   if (services.supervisor.driverOf(runId) === null) untilStored(services, end, 'the end of a run that was not begun');
 }

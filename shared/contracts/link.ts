@@ -120,7 +120,7 @@ const guidedPath = `${rigPath}/guided`;
 /** Whoever orders looks at the gap and means to enter an arc that is kept out of runs. */
 const intoKeepOut = z.boolean().default(false);
 /** When the tap was made, by the page's clock corrected to the server's: a tap that moves something counts for 5 s. */
-const tappedAt = instantSchema.optional();
+const tappedAt = instantSchema;
 const orderProblems = [
   'invalid-input',
   'not-found',
@@ -260,7 +260,7 @@ const halt = <L extends 'hold' | 'stop'>(leaf: L, route: { name: string; summary
     path: `${rigPath}/${leaf}` as const,
     status: 202,
     idempotent: true,
-    body: z.strictObject({ tappedAt }),
+    body: z.strictObject({ tappedAt: tappedAt.optional() }),
     response: z.strictObject({ rigId: idSchema, serverAt: instantSchema }),
     problems: ['invalid-input', 'not-found', 'not-possible-now', 'key-reused', 'still-running'],
   });

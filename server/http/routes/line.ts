@@ -54,14 +54,16 @@ const asked = (context: { me: SignedIn; params: { rigId: string } }, guidedId: s
 type OrderContext = Caller & { params: { rigId: string } };
 
 /** Says who orders what in the audit chain, then orders it: what sets something in motion is saved first. */
-async function give(context: OrderContext, body: { guidedId: string; tappedAt?: string | undefined }, order: MoveRequest) {
+async function give(context: OrderContext, body: { guidedId: string; tappedAt: string }, order: MoveRequest) {
   const { services } = context;
-  assertFreshTap(body.tappedAt, services.clock.utcMs(), order.kind === 'home' ? 'home' : 'nudge');
+  const assertFresh = () => void assertFreshTap(body.tappedAt, services.clock.utcMs(), order.kind === 'home' ? 'home' : 'nudge');
   const rig = await load(context, context.params.rigId);
+  assertFresh();
   const who = asked(context, body.guidedId);
   engine(() => services.guided.assertMayOrder(who, order));
   const entry = { kind: order.kind === 'home' ? 'rig.home-asked' : 'rig.nudge-asked', data: () => ({ rigId: rig.id, ...order }) };
   await audited(context, entry, async () => undefined);
+  assertFresh();
   return guidedViewOf(
     services,
     engine(() => services.guided.order(who, order)),
@@ -148,8 +150,8 @@ const limitsOfDocument = (motion: RigMotion): ControllerLimits => ({
 const teachRoutes = [
   mount(contracts.teachLimits, async (context) => {
     const { body, params, services, ifMatch } = context;
-    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'write the limits');
     const rig = await load(context, params.rigId);
+    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'write the limits');
     if (!knowsRevision(ifMatch, rig))
       throw new ProblemError(
         'edited-meanwhile',

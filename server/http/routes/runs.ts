@@ -48,7 +48,8 @@ const startRoutes = [
     if (revision === null) throw notFound('protocol revision');
     const massSet = await findMassSet(db, { labId: membership.labId, rigId: rig.id }, body.massSetId);
     if (massSet === null) throw notFound('mass set');
-    assertFreshTap(body.tappedAt, services.clock.utcMs(), 'start');
+    const stillCounts = () => void assertFreshTap(body.tappedAt, services.clock.utcMs(), 'start');
+    stillCounts();
     services.reviews.take(body.reviewToken, { userId: context.me.userId, rigId: rig.id, subject: startSubject(body) });
     const run = await beginRun(context, {
       rig,
@@ -57,6 +58,7 @@ const startRoutes = [
       revision: revision.number,
       massSet,
       notes: body.notes,
+      stillCounts,
     });
     return runSummaryOf(run);
   }),

@@ -244,14 +244,14 @@ describe('a personal lock', () => {
     const guidedId = (await lab.as('keeper', 'POST', `${rig}/guided`).send({ atTheRig: true }).expect(201)).body.id as string;
     const stay = () => lab.as('keeper', 'POST', `${rig}/guided/stay`).send({ guidedId, beat: lab.clock.monotonicMs() });
     await stay().expect(204);
-    await lab.as('keeper', 'POST', `${rig}/guided/nudge`).send({ guidedId, steps: 400 }).expect(202);
+    await lab.as('keeper', 'POST', `${rig}/guided/nudge`).send({ tappedAt: lab.nowIso(), guidedId, steps: 400 }).expect(202);
     await lab.advance(1_500);
     expect(lab.station().link.controller()?.moving).toBe(true);
     const lockId = (await set('operator').expect(201)).body.id as string;
     await lab.advance(2_000);
     expect(lab.station().link.controller()?.moving).toBe(false);
     await stay().expect(204);
-    const refused = await lab.as('keeper', 'POST', `${rig}/guided/nudge`).send({ guidedId, steps: 4 }).expect(409);
+    const refused = await lab.as('keeper', 'POST', `${rig}/guided/nudge`).send({ tappedAt: lab.nowIso(), guidedId, steps: 4 }).expect(409);
     expect(refused.body.code).toBe('locked');
     const { world } = lab;
     await lab.stop();

@@ -65,7 +65,8 @@ describe('a guided first move', () => {
   test('turns the table by what was asked, says so in the audit chain, and acts once for a key', async () => {
     const guidedId = await begin();
     const key = 'a-nudge-of-forty-steps';
-    const nudge = () => post('/guided/nudge', { guidedId, steps: 40 }).set('Idempotency-Key', key);
+    const tappedAt = lab.nowIso();
+    const nudge = () => post('/guided/nudge', { tappedAt, guidedId, steps: 40 }).set('Idempotency-Key', key);
     const first = await nudge().expect(202);
     expect(first.body).toMatchObject({ order: { kind: 'nudge', steps: 40 }, by: { name: 'Casimir Thornquist' }, present: true });
     await stay(guidedId, 5);
@@ -81,16 +82,16 @@ describe('a guided first move', () => {
 
   test('refuses what is no nudge with the field and what would be right, and an old tap', async () => {
     const guidedId = await begin();
-    const long = await post('/guided/nudge', { guidedId, steps: 5000 }).expect(400);
+    const long = await post('/guided/nudge', { tappedAt: lab.nowIso(), guidedId, steps: 5000 }).expect(400);
     expect(long.body).toMatchObject({
       code: 'invalid-input',
       errors: [{ path: 'steps', message: expect.stringContaining('from 1 to 433') }],
     });
-    await post('/guided/nudge', { guidedId, steps: 0.5 }).expect(400);
+    await post('/guided/nudge', { tappedAt: lab.nowIso(), guidedId, steps: 0.5 }).expect(400);
     const tappedAt = new Date(lab.clock.utcMs() - 6_000).toISOString();
     expect((await post('/guided/nudge', { guidedId, steps: 5, tappedAt }).expect(409)).body.detail).toContain('Nothing was moved');
     await end(guidedId);
-    expect((await post('/guided/nudge', { guidedId, steps: 5 }).expect(409)).body.detail).toContain('has ended');
+    expect((await post('/guided/nudge', { tappedAt: lab.nowIso(), guidedId, steps: 5 }).expect(409)).body.detail).toContain('has ended');
   });
 
   test('and a run keep off each other', async () => {
@@ -124,7 +125,7 @@ describe('a guided first move', () => {
 
   test('is held by any member', async () => {
     const guidedId = await begin();
-    await post('/guided/nudge', { guidedId, steps: 400 }).expect(202);
+    await post('/guided/nudge', { tappedAt: lab.nowIso(), guidedId, steps: 400 }).expect(202);
     await stay(guidedId, 2);
     const before = angle();
     await post('/hold', {}, 'viewer').expect(202);
@@ -148,8 +149,8 @@ describe('a guided first move', () => {
       .expect(200);
     await lab.advance(3_000);
     await stay(guidedId, 1);
-    expect((await post('/guided/teach', { guidedId }).set('If-Match', tag).expect(412)).body.code).toBe('edited-meanwhile');
-    const answer = post('/guided/teach', { guidedId })
+    expect((await post('/guided/teach', { tappedAt: lab.nowIso(), guidedId }).set('If-Match', tag).expect(412)).body.code).toBe('edited-meanwhile');
+    const answer = post('/guided/teach', { tappedAt: lab.nowIso(), guidedId })
       .set('If-Match', await etag())
       .then(({ body, status }) => ({ body: body as { limits: unknown }, status }));
     for (let turn = 0; turn < 20; turn += 1) {
