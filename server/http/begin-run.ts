@@ -98,7 +98,10 @@ function refusalOfChecks({ checks }: StartReport): ProblemError | null {
 }
 
 /** Starts a run: checks, the row in the database, then the engine. */
-export async function beginRun(caller: Caller, begin: Begin & { massSet: MassSetRecord; claim?: Claim; stillCounts?: StillCounts }): Promise<RunRecord> {
+export async function beginRun(
+  caller: Caller,
+  begin: Begin & { massSet: MassSetRecord; claim?: Claim; stillCounts?: StillCounts },
+): Promise<RunRecord> {
   const { services } = caller;
   const document = { ...begin.rig.document, sources: begin.massSet.sources };
   const refusal = refusalOf(checkProtocol(begin.protocol, document));
@@ -192,7 +195,11 @@ function assertStillCounts(services: Services, start: RunStart, stillCounts: Sti
   try {
     stillCounts?.();
   } catch (error) {
-    endUnbegun(services, start, 'It took so long to store the run that the tap to start no longer counted, so it was not begun. Nothing was moved.');
+    endUnbegun(
+      services,
+      start,
+      'It took so long to store the run that the tap to start no longer counted, so it was not begun. Nothing was moved.',
+    );
     throw error;
   }
 }

@@ -130,7 +130,10 @@ describe('a prompt', () => {
     await bench.pass(60);
     expect(bench.link.motions).toHaveLength(moved);
     bench.arm.now = { name: 'Ilse', untilUtcMs: bench.clock.utcMs() + 1_000 };
-    const short = { ok: false, why: expect.stringMatching(/^The arm of Ilse ends at .*, before the predicted finish at .* Arm the rig until after that\.$/) };
+    const short = {
+      ok: false,
+      why: expect.stringMatching(/^The arm of Ilse ends at .*, before the predicted finish at .* Arm the rig until after that\.$/),
+    };
     expect(bench.driver.facts().waiting?.mayConfirm).toEqual(short);
     expect(await bench.driver.requests.confirmPrompt('Ilse')).toEqual(short);
     expect(bench.link.motions).toHaveLength(moved);
@@ -206,11 +209,22 @@ describe('dwells that are not good', () => {
 });
 
 test('a proof without any deflection says so to whoever waits for it, and the run goes on', async () => {
-  const bench = await running(withSteps({ kind: 'dwell', duration_s: 60 }, { kind: 'swing', to: 'far' }, { kind: 'dwell', duration_s: 60 }, { kind: 'proof', otherwise: 'hold' }));
+  const bench = await running(
+    withSteps(
+      { kind: 'dwell', duration_s: 60 },
+      { kind: 'swing', to: 'far' },
+      { kind: 'dwell', duration_s: 60 },
+      { kind: 'proof', otherwise: 'hold' },
+    ),
+  );
   await bench.pass(300, () => state(bench) === 'finished');
   expect(state(bench)).toBe('finished');
   expect(eventOf(bench, 'proof-not-possible')).toMatchObject({ path: '6.proof' });
   expect(bench.performed).toContainEqual(
-    expect.objectContaining({ kind: 'notify', topic: 'proved', text: expect.stringContaining('no deflection came in while the dwells went on') }),
+    expect.objectContaining({
+      kind: 'notify',
+      topic: 'proved',
+      text: expect.stringContaining('no deflection came in while the dwells went on'),
+    }),
   );
 });

@@ -149,7 +149,9 @@ describe('a guided first move', () => {
       .expect(200);
     await lab.advance(3_000);
     await stay(guidedId, 1);
-    expect((await post('/guided/teach', { tappedAt: lab.nowIso(), guidedId }).set('If-Match', tag).expect(412)).body.code).toBe('edited-meanwhile');
+    expect((await post('/guided/teach', { tappedAt: lab.nowIso(), guidedId }).set('If-Match', tag).expect(412)).body.code).toBe(
+      'edited-meanwhile',
+    );
     const answer = post('/guided/teach', { tappedAt: lab.nowIso(), guidedId })
       .set('If-Match', await etag())
       .then(({ body, status }) => ({ body: body as { limits: unknown }, status }));
