@@ -211,9 +211,9 @@ describe('dwells that are not good', () => {
 test('a proof without any deflection says so to whoever waits for it, and the run goes on', async () => {
   const bench = await running(
     withSteps(
-      { kind: 'dwell', duration_s: 60 },
+      { kind: 'dwell', for_s: 60 },
       { kind: 'swing', to: 'far' },
-      { kind: 'dwell', duration_s: 60 },
+      { kind: 'dwell', for_s: 60 },
       { kind: 'proof', otherwise: 'hold' },
     ),
   );
