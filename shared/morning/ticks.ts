@@ -64,8 +64,14 @@ function firstPair({ events, result, predictedRad, control }: TickFacts): Mornin
     return { code, ok: null, words: 'No near − far to compare with the prediction yet' };
   const off = found / predictedRad - 1;
   const ok = Math.abs(off) <= sizeLimit;
-  const words = `Near − far ${formatPercent(Math.abs(off))} ${off < 0 ? 'below' : 'above'} the prediction`;
+  const words = `Near − far ${formatPercent(Math.abs(off))} ${off < 0 ? 'below' : 'above'} the prediction, ${uOfRatio(result)}`;
   return { code, ok, words: ok ? words : `${words}, ${formatPercent(sizeLimit)} allowed` };
+}
+
+/** Over the prediction near minus far is what G by the equilibria is over the G of the prediction, so that its u holds both that of the night and that of the rig. */
+function uOfRatio(result: EvaluationResult | null): string {
+  const u = result?.method === 'equilibrium' ? result.relativeU : null;
+  return u === null ? 'u not known' : `u ${formatPercent(u)}`;
 }
 
 function edge({ events, edgeToleranceDeg }: TickFacts): MorningTick {

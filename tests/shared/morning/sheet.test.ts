@@ -120,7 +120,7 @@ test('a control has nothing predicted, and is told as one', () => {
 
 test('the five ticks of an ordinary night, each with its figure', () => {
   expect(morningSheet(night).ticks).toEqual([
-    { code: 'first-pair', ok: true, words: 'Near − far 5.0 % below the prediction' },
+    { code: 'first-pair', ok: true, words: 'Near − far 5.0 % below the prediction, u 1.0 %' },
     { code: 'edge', ok: true, words: expect.stringMatching(/^Home edge moved 0\.010°, 0\.\d{3}° allowed$/) },
     { code: 'samples', ok: true, words: '99.5 % of the samples, longest gap 1 min 30 s' },
     { code: 'clock', ok: true, words: 'Clock off by 1.25(10) s, put right' },
@@ -128,11 +128,16 @@ test('the five ticks of an ordinary night, each with its figure', () => {
   ]);
 });
 
+test('how far near minus far is off has no u where the night gives none, or where G is told otherwise', () => {
+  for (const other of [{ relativeU: null }, { method: 'acceleration' as const }])
+    expect(tick({ result: { ...result, ...other } }, 'first-pair')?.words).toBe('Near − far 5.0 % below the prediction, u not known');
+});
+
 test('what speaks against the night is no tick', () => {
   const small = { ...result, reversal_rad: { value: 0.7 * predictedRad, u: 1e-6, count: 2 } };
   expect(tick({ result: small }, 'first-pair')).toMatchObject({
     ok: false,
-    words: expect.stringContaining('30 % below the prediction, 20 % allowed'),
+    words: expect.stringContaining('30 % below the prediction, u 1.0 %, 20 % allowed'),
   });
   const turned = { ...result, reversal_rad: { value: -predictedRad, u: 1e-6, count: 2 } };
   expect(tick({ result: turned }, 'first-pair')?.ok).toBe(false);
