@@ -2,7 +2,8 @@ import { useState } from 'react';
 import { View } from 'react-native';
 import { fieldErrors, useLabMutation, wordsOf } from '@/components/api';
 import { SecretOnce } from '@/components/rigs/secret-once';
-import { Body, Button, Field, Label, ProblemNotice, Sheet, Tabs } from '@/components/ui';
+import { TryIt } from '@/components/rigs/try-it';
+import { Button, Field, Label, ProblemNotice, Sheet, Tabs } from '@/components/ui';
 import { addCamera, type CameraKind } from '@/shared/contracts/cameras';
 
 interface CameraSheetProps {
@@ -117,7 +118,6 @@ function Place({ hosts, draft, set, error }: PlaceProps) {
 
 /** The one time that the token of a camera is seen. */
 function Made({ secret, name, onClose }: { secret: string; name: string; onClose: () => void }) {
-  const example = `curl -sS ${window.location.origin}/api/camera-pictures \\\n  -H "Authorization: Bearer $TOKEN" \\\n  -H "Content-Type: image/jpeg" \\\n  --data-binary @picture.jpg`;
   return (
     <Sheet
       open
@@ -128,12 +128,7 @@ function Made({ secret, name, onClose }: { secret: string; name: string; onClose
       footer={<Button kind="primary" size="action" label="I have copied it" onPress={onClose} testID="camera-copied" />}
     >
       <SecretOnce secret={secret} may="show pictures as this camera" testID="camera-secret" />
-      <Body strong>Try it</Body>
-      <View className="rounded-action bg-panel2 p-3">
-        <Body size={13} className="break-all font-mono">
-          {example}
-        </Body>
-      </View>
+      <TryIt path="/api/camera-pictures" contentType="image/jpeg" data="@picture.jpg" />
       <Label>Send one every few seconds: a run takes the first one that was taken after a moment, within 10 s.</Label>
     </Sheet>
   );

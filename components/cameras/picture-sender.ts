@@ -1,5 +1,7 @@
 import { ApiProblem } from '@/components/api/problem';
 import type { CameraPort, OpenCamera } from '@/components/spot/camera';
+import type { DeviceWatch } from '@/components/spot/device-watch';
+import { ofDevice } from '@/shared/spot/warnings';
 
 export type SenderCamera =
   | { kind: 'closed' | 'opening' }
@@ -15,11 +17,13 @@ export interface SenderView {
   sentAtMs: number | null;
   /** Why the last picture did not come to the server, or why none is sent any more; null while all goes well. */
   trouble: string | null;
+  /** What may end it: battery, sleep, a page that is not seen. */
+  warnings: readonly string[];
 }
 
 export interface SenderParts {
   camera: CameraPort;
-  device: { keepAwake(): void; letSleep(): void };
+  device: Pick<DeviceWatch, 'now' | 'keepAwake' | 'letSleep'>;
   /** The picture that is shown now, as JPEG; null where there is none. */
   shot(): Promise<Blob | null>;
   /** Rejects where it was not taken. `ageS`: how long ago it was taken, s. */
@@ -42,7 +46,7 @@ function wordsOf(error: unknown): string {
 
 /** Sends what a camera of this device shows, a picture every few seconds. Has no timers of its own: `step` is to be called some times a second. */
 export class PictureSender {
-  private state: SenderView = { camera: { kind: 'closed' }, sending: false, sent: 0, sentAtMs: null, trouble: null };
+  private state: SenderView = { camera: { kind: 'closed' }, sending: false, sent: 0, sentAtMs: null, trouble: null, warnings: [] };
   private open: OpenCamera | null = null;
   private wantedId: string | null = null;
   private takenMs: number | null = null;
@@ -54,7 +58,15 @@ export class PictureSender {
   constructor(private readonly parts: SenderParts) {}
 
   view(): SenderView {
-    return this.state;
+    return { ...this.state, warnings: this.state.sending ? ofDevice(this.parts.device.now(), 'the browser shows it no pictures') : [] };
+  }
+
+  /** Goes on as a page before this one did: the camera is looked for until it is there. */
+  resume(): void {
+    this.closeCamera();
+    this.dueMs.reopen = 0;
+    this.change({ camera: { kind: 'lost', why: 'The page was loaded anew.' } });
+    this.begin();
   }
 
   async openCamera(id: string | null): Promise<void> {

@@ -3,6 +3,7 @@ import { useState } from 'react';
 import { View } from 'react-native';
 import { monotonicMs, useLabMutation, useMay, wordsOf } from '@/components/api';
 import { CameraChoice, DeviceActs, DeviceScreen } from '@/components/spot/device-screen';
+import { Warnings } from '@/components/spot/live-panel';
 import { Body, Button, Field, Label, Panel, ProblemNotice, Section } from '@/components/ui';
 import { addCamera } from '@/shared/contracts/cameras';
 import { formatAgo } from '@/shared/lib/format-duration';
@@ -13,7 +14,7 @@ import { useKeptToken, usePictureSender, type SenderPage } from './use-picture-s
 export function SendPicturesScreen() {
   const { rigId } = useLocalSearchParams<{ rigId: string }>();
   const [token, keep] = useKeptToken(rigId);
-  const page = usePictureSender(token.trim());
+  const page = usePictureSender(rigId, token.trim());
   return (
     <DeviceScreen
       title="Send pictures"
@@ -37,6 +38,7 @@ function DeviceCamera({ page: { place, sender, view } }: { page: SenderPage }) {
       <View className="w-full max-w-[640px]">
         <Video onVideo={place.set} shown={isShown} />
       </View>
+      <Warnings warnings={view.warnings} />
       <CameraChoice
         state={camera.kind}
         chosen={camera.kind === 'open' ? camera.id : null}
@@ -93,15 +95,15 @@ function TokenPanel(props: { rigId: string; token: string; onToken: (token: stri
   );
 }
 
-function Acts({ page: { sender, view }, hasToken }: { page: SenderPage; hasToken: boolean }) {
+function Acts({ page: { begin, end, view }, hasToken }: { page: SenderPage; hasToken: boolean }) {
   const missing = [view.camera.kind === 'open' ? null : 'open the camera', hasToken ? null : 'add it to the rig, or give its token'];
   return (
     <DeviceActs
       sending={view.sending}
       missing={missing.filter((one) => one !== null)}
       missingTestID="send-missing"
-      begin={{ label: 'Send a picture every 3 s', onPress: () => sender.begin(), testID: 'send-begin' }}
-      end={{ label: 'Send no more', onPress: () => sender.end(), testID: 'send-end' }}
+      begin={{ label: 'Send a picture every 3 s', onPress: begin, testID: 'send-begin' }}
+      end={{ label: 'Send no more', onPress: end, testID: 'send-end' }}
     >
       {view.trouble === null ? null : (
         <Body tone="danger" role="status" testID="send-trouble">

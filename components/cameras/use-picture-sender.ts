@@ -24,6 +24,8 @@ export interface SenderPage {
   place: VideoPlace;
   sender: PictureSender;
   view: SenderView;
+  begin(): void;
+  end(): void;
 }
 
 async function shotOf(video: HTMLVideoElement | null): Promise<Blob | null> {
@@ -46,11 +48,12 @@ async function send(deviceToken: string, raw: Blob, ageS: number): Promise<void>
   }
 }
 
-function makeSender() {
+function makeSender(goesOn: boolean) {
   const place = new VideoPlace();
   const device = watchDevice();
   const camera = browserCamera(() => place.element);
   const sender = new PictureSender({ camera, device, shot: () => shotOf(place.element), send, nowMs: monotonicMs });
+  if (goesOn) sender.resume();
   const end = () => {
     sender.closeCamera();
     device.end();
@@ -58,9 +61,10 @@ function makeSender() {
   return { place, sender, end };
 }
 
-/** The sender of this page, which lives as long as the page. */
-export function usePictureSender(token: string): SenderPage {
-  const [{ place, sender, end }] = useState(makeSender);
+/** The sender of this page, which lives as long as the page; one that was sending when it was loaded anew goes on. */
+export function usePictureSender(rigId: string, token: string): SenderPage {
+  const [sends, keepSends] = useKept(`evenfall.camera.${rigId}.sends`);
+  const [{ place, sender, end }] = useState(() => makeSender(sends === 'yes' && token !== ''));
   const [view, setView] = useState(() => sender.view());
   useEffect(() => {
     const timer = setInterval(() => {
@@ -70,29 +74,38 @@ export function usePictureSender(token: string): SenderPage {
     return () => clearInterval(timer);
   }, [sender, token]);
   useEffect(() => end, [end]);
-  return { place, sender, view };
+  const begin = () => {
+    keepSends('yes');
+    sender.begin();
+  };
+  const stop = () => {
+    keepSends('');
+    sender.end();
+  };
+  return { place, sender, view, begin, end: stop };
 }
 
-const keyOf = (rigId: string) => `evenfall.camera.${rigId}`;
-
-function read(rigId: string): string {
+function read(key: string): string {
   try {
-    return window.localStorage.getItem(keyOf(rigId)) ?? '';
+    return window.localStorage.getItem(key) ?? '';
   } catch {
     return '';
   }
 }
 
-/** The token of the camera that this device is, kept on the device; a browser that refuses storage keeps it for this page only. */
-export function useKeptToken(rigId: string): [token: string, keep: (token: string) => void] {
-  const [token, setToken] = useState(() => read(rigId));
+/** A text that the device keeps; a browser that refuses storage keeps it for this page only. */
+function useKept(key: string): [text: string, keep: (text: string) => void] {
+  const [text, setText] = useState(() => read(key));
   const keep = (next: string) => {
-    setToken(next);
+    setText(next);
     try {
-      window.localStorage.setItem(keyOf(rigId), next.trim());
+      window.localStorage.setItem(key, next.trim());
     } catch {
       return;
     }
   };
-  return [token, keep];
+  return [text, keep];
 }
+
+/** The token of the camera that this device is. */
+export const useKeptToken = (rigId: string) => useKept(`evenfall.camera.${rigId}`);

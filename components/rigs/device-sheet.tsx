@@ -1,11 +1,11 @@
 import { useState } from 'react';
-import { View } from 'react-native';
 import { fieldErrors, useLabMutation, wordsOf } from '@/components/api';
-import { Body, Button, Field, Label, ProblemNotice, Sheet, Tabs } from '@/components/ui';
+import { Button, Field, Label, ProblemNotice, Sheet, Tabs } from '@/components/ui';
 import { readDecimal } from '@/components/ui/read-decimal';
 import { makeDeviceToken, type StreamChannel } from '@/shared/contracts/devices';
 import type { RigView } from '@/shared/contracts/rigs';
 import { SecretOnce } from './secret-once';
+import { TryIt } from './try-it';
 
 /** Makes a token for a device: what it measures, how often; the token is shown once, with a line to try it. */
 export function DeviceSheet({ rig, onClose }: { rig: RigView; onClose: () => void }) {
@@ -95,7 +95,6 @@ export function DeviceSheet({ rig, onClose }: { rig: RigView; onClose: () => voi
 /** The one time that the token is seen. */
 function Made({ secret, name, channel, onClose }: { secret: string; name: string; channel: StreamChannel; onClose: () => void }) {
   const line = `{"channel": "${channel.name}", "time_utc": "2031-02-14T20:00:00.1Z", "value": 12.3}`;
-  const example = `curl -sS ${window.location.origin}/api/samples \\\n  -H "Authorization: Bearer $TOKEN" \\\n  -H "Content-Type: application/x-ndjson" \\\n  --data-binary '${line}'`;
   return (
     <Sheet
       open
@@ -106,12 +105,7 @@ function Made({ secret, name, channel, onClose }: { secret: string; name: string
       footer={<Button kind="primary" size="action" label="I have copied it" onPress={onClose} testID="device-copied" />}
     >
       <SecretOnce secret={secret} may="fill this channel" testID="device-secret" />
-      <Body strong>Try it</Body>
-      <View className="rounded-action bg-panel2 p-3">
-        <Body size={13} className="break-all font-mono">
-          {example}
-        </Body>
-      </View>
+      <TryIt path="/api/samples" contentType="application/x-ndjson" data={`'${line}'`} />
       <Label>
         One line for each sample, in UTC with Z. What is sent again is stored once; a line that is wrong is named and nothing is stored.
       </Label>

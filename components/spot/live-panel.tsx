@@ -111,7 +111,8 @@ function OfOthers({ buffer, channel }: { buffer: SpotBuffer; channel: string }) 
 
 const holdsWords = `twelve hours at 10${NARROW_SPACE}Hz`;
 
-function Warnings({ warnings }: { warnings: readonly string[] }) {
+/** What whoever is at the device should do before leaving it alone. */
+export function Warnings({ warnings }: { warnings: readonly string[] }) {
   if (warnings.length === 0) return null;
   return (
     <Panel edge="lamp" className="gap-2" testID="spot-warnings">

@@ -50,6 +50,15 @@ export async function removeCamera(
   return row;
 }
 
+/** In place of one that lay there readable. */
+export async function sealPassword(db: Handle, { labId, id, password: readable }: CameraRecord, password: string): Promise<void> {
+  if (readable === null) return;
+  await db
+    .update(cameras)
+    .set({ password })
+    .where(and(eq(cameras.labId, labId), eq(cameras.id, id), eq(cameras.password, readable)));
+}
+
 /** The camera that counts whose token has this hash. */
 export async function cameraByHash(db: Handle, tokenHash: string): Promise<CameraRecord | null> {
   const [row] = await db

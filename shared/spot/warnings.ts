@@ -91,9 +91,10 @@ function ofClock({ clockUMs, clockErrorMs }: WarningFacts): string[] {
   return found;
 }
 
-function ofDevice({ awake, battery, hidden }: WatchedDevice): string[] {
+/** What may end the work of a page whose camera works for a rig; `hiddenWords`: what ends when nobody sees it. */
+export function ofDevice({ awake, battery, hidden }: WatchedDevice, hiddenWords = 'the browser reads no pictures'): string[] {
   const found: string[] = [];
-  if (hidden) found.push('This page is not seen: the browser reads no pictures. Bring it to the front and leave it there.');
+  if (hidden) found.push(`This page is not seen: ${hiddenWords}. Bring it to the front and leave it there.`);
   if (awake === null) found.push('This browser cannot keep the device awake: switch its sleep off in the settings of the system.');
   else if (!awake) found.push('The device may fall asleep: the browser did not grant that it stays awake.');
   if (battery !== null && !battery.charging)

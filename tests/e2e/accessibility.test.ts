@@ -2,7 +2,7 @@ import { demoIds } from '@/db/demo/seed';
 import { reportCondition } from '@/server/store/alarms';
 import { sizes, type Size } from '../support/browser';
 import { findings, themes } from './support/axe';
-import { bringsIn, checksAnother } from './support/brought-in';
+import { bringsIn, checksAnother, sendsInVain } from './support/brought-in';
 import { Hand, until } from './support/hand';
 import { labOfThisFile } from './support/lab';
 import { finishedNight, issued, read, shortNight, started } from './support/night';
@@ -43,6 +43,7 @@ const opened = (testId: string, sheet: string) => async (hand: Hand) => {
   await hand.at(sheet).waitFor();
 };
 
+const checksNight = (hand: Hand) => checksAnother(hand, nightUtcMs);
 const says = (testId: string, words?: string) => async (hand: Hand) => void (await hand.reads(testId, words));
 
 const publicPlaces: Place[] = [
@@ -87,12 +88,8 @@ function places(): Place[] {
     { name: 'data', path: `/runs/${finishedId}/data`, arrives: 'data-screen', first: says('kept-files', 'night.csv') },
     { name: 'marking', path: `/runs/${finishedId}/data`, arrives: 'channel-plot', first: opened('mark', 'marking') },
     { name: 'import', path: `/runs/${finishedId}/import`, arrives: 'import-screen', first: says('unfinished', 'another.csv') },
-    {
-      name: 'findings',
-      path: `/runs/${finishedId}/import?again`,
-      arrives: 'import-screen',
-      first: (hand) => checksAnother(hand, nightUtcMs),
-    },
+    { name: 'findings', path: `/runs/${finishedId}/import?again`, arrives: 'import-screen', first: checksNight },
+    { name: 'uploading', path: `/runs/${finishedId}/import?uploads`, arrives: 'import-screen', first: sendsInVain },
     {
       name: 'evaluation',
       path: `/runs/${finishedId}/evaluation`,
@@ -104,6 +101,8 @@ function places(): Place[] {
     { name: 'schedule', path: '/calendar', arrives: 'calendar-screen', first: opened('schedule-a-run', 'schedule-confirm') },
     { name: 'lab', path: '/lab', arrives: 'lab-screen', first: says('on-call', 'Whoever') },
     { name: 'on-call', path: '/lab', arrives: 'lab-screen', first: opened('change-on-call', 'on-call-sheet') },
+    { name: 'broker', path: rig, arrives: 'rig-screen', first: opened('add-broker', 'broker-sheet') },
+    { name: 'calibration', path: rig, arrives: 'rig-screen', first: opened('add-calibration', 'calibration-sheet') },
     { name: 'camera', path: rig, arrives: 'rig-screen', first: opened('add-camera', 'camera-sheet') },
     { name: 'limit', path: rig, arrives: 'rig-screen', first: opened('add-limit', 'limit-sheet') },
     { name: 'retention', path: '/lab/retention', arrives: 'retention-screen', first: says('kept-channels', 'for ever') },

@@ -68,6 +68,6 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     await row()
       .getByText(/^Full rate from .* on and within runs; before, summaries of 2\ss\. 3600 samples went\.$/)
       .waitFor();
-    await hand.shoots('retention');
+    await hand.shootsThemes('retention', () => hand.goes('/lab/retention', 'kept-channels'));
   });
 });

@@ -54,6 +54,13 @@ describe.each(['phone', 'wide'] as const)('%s', (size) => {
     await lab().close(other.browser);
   });
 
+  chapter('it says what may end it, and a page that was loaded anew goes on by itself', async () => {
+    await hand.reads('spot-warnings', /The device may fall asleep|This browser cannot keep the device awake|On battery/);
+    await hand.goes(`${rig}/send-pictures`, 'send-pictures-screen');
+    await hand.reads('send-state', /^[1-9]\d* sent, the last/);
+    await hand.at('send-end').waitFor();
+  });
+
   chapter('when the camera is removed from the rig the page stops, and says why', async () => {
     const { body } = await lab().server.as('owner', 'GET', `/labs/${demoIds.lab}${rig}/cameras`).expect(200);
     const { id } = (body as { items: { id: string; name: string }[] }).items.find(({ name }) => name === `Film ${size}`) as { id: string };

@@ -3,7 +3,7 @@ import type { BrokerStatus, BrokerView } from '@/shared/contracts/brokers';
 import * as store from '@/server/store/brokers';
 import { audited } from '../audited';
 import { certificateFault } from '@/server/ingest/certificates';
-import { sealedPassword } from '../broker-password';
+import { sealedPassword } from '../kept-password';
 import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
@@ -66,7 +66,7 @@ export const brokerRoutes = [
     const wanted = body.topics.map(({ channel }) => channel);
     const made = await audited(context, entry, async (tx) => {
       await makeStreamChannels(tx, { ...rig, createdAt: madeAt }, { wanted, pathOf });
-      const password = sealedPassword(services, rig, body.password);
+      const password = sealedPassword(services, { of: 'broker', ...rig }, body.password);
       return store.insertBroker(tx, { ...rig, ...body, ca: body.ca ?? null, password, madeAt, madeBy: me.name });
     });
     return viewOf(made, madeAt);
@@ -96,7 +96,7 @@ export const brokerRoutes = [
       const given =
         signIn === 'as-before'
           ? { userName: before.userName, password: before.password }
-          : { userName: signIn.userName, password: sealedPassword(services, rig, signIn.password) };
+          : { userName: signIn.userName, password: sealedPassword(services, { of: 'broker', ...rig }, signIn.password) };
       return store.reviseBroker(tx, before, { ...given, address, topics, ca: body.ca ?? null });
     });
     return viewOf(revised, nowUtcMs);

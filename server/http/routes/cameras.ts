@@ -9,6 +9,7 @@ import * as store from '@/server/store/cameras';
 import { findRig } from '@/server/store/rigs';
 import { audited } from '../audited';
 import { bearerOf, boundedBody } from '../device-request';
+import { sealedPassword } from '../kept-password';
 import { isoOf, isoOrNull } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount } from '../route-context';
@@ -105,7 +106,7 @@ const rigRoutes = [
       const { name, kind } = body;
       const { address, userName, password } = body.kind === 'address' ? body : { address: null, userName: null, password: null };
       const tokenHash = secret === null ? null : services.sha256(secret);
-      const place = { address, userName, password, tokenHash };
+      const place = { address, userName, password: sealedPassword(services, { of: 'camera', ...ofRig }, password), tokenHash };
       return store.insertCamera(tx, { ...ofRig, name, kind, ...place, madeAt: services.clock.utcMs(), madeBy: me.name });
     });
     return { camera: viewOf({ ...made, takenAt: null }), secret };

@@ -1,12 +1,12 @@
 import { BrokerFeed } from '@/server/ingest/broker-feed';
 import type { OpenBrokerLine } from '@/server/interfaces/broker-line';
 import type { Cancel } from '@/server/interfaces/clock';
-import { allBrokers, tellBrokerStatus, type BrokerRecord } from '@/server/store/brokers';
+import { allBrokers, sealPassword, tellBrokerStatus, type BrokerRecord } from '@/server/store/brokers';
 import { ConflictingBatchError, storeBatches } from '@/server/store/device-tokens';
 import { isPassing } from '@/server/store/failures';
 import { channelsOfRig, type ChannelRecord } from '@/server/store/imports';
 import { ThinnedSamplesError } from '@/server/store/thinned-error';
-import { readPassword } from '../broker-password';
+import { readPassword } from '../kept-password';
 import type { Services } from '../services';
 
 /** Where no broker is listened to: whether there is one now, ms. */
@@ -71,7 +71,9 @@ export class BrokerWatch {
     await this.leave(wanted);
     for (const broker of this.stopped ? [] : wanted) {
       if (this.held.has(broker.id)) continue;
-      const password = await readPassword(services, broker);
+      const password = await readPassword(services, { of: 'broker', ...broker }, (sealed) =>
+        sealPassword(services.database.db, broker, sealed),
+      );
       const feed = new BrokerFeed({ broker, password, clock, open, samplesPerMinute: () => config.devices.samplesPerMinute });
       this.held.set(broker.id, { broker, way: wayOf(broker), feed, told: '', toldAtMs: 0 });
     }

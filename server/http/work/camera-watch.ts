@@ -9,6 +9,7 @@ import type { Cancel } from '@/server/interfaces/clock';
 import * as store from '@/server/store/cameras';
 import { isPassing } from '@/server/store/failures';
 import { isoOf } from '../maker';
+import { readPassword } from '../kept-password';
 import type { Services } from '../services';
 
 /** Moments that wait for one camera; more are noted as missed. */
@@ -179,10 +180,18 @@ export class CameraWatch {
   }
 
   /** A picture, or why there is none. */
-  private async take({ kind, rigId, address, userName, password }: store.CameraRecord): Promise<Picture | string> {
-    const { clock, stations, cameras, log } = this.parts.services;
+  private async take(camera: store.CameraRecord): Promise<Picture | string> {
+    const { services } = this.parts;
+    const { clock, stations, cameras, log, database } = services;
+    const { kind, rigId, address, userName } = camera;
     try {
-      if (kind === 'address') return await cameras.take({ address: address ?? '', userName, password }, this.stopping.signal);
+      if (kind === 'address') {
+        const password = await readPassword(services, { of: 'camera', ...camera }, (sealed) =>
+          store.sealPassword(database.db, camera, sealed),
+        );
+        if (password === undefined) return 'its password was kept by a server with another key: remove the camera and add it again';
+        return await cameras.take({ address: address ?? '', userName, password }, this.stopping.signal);
+      }
       const seen = stations.get(rigId)?.seen?.() ?? null;
       if (seen === null) return 'this rig is not part of the server, so it cannot be drawn';
       const takenUtcMs = clock.utcMs();

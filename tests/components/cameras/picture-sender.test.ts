@@ -16,7 +16,11 @@ function bench() {
         return { id: id ?? 'first', name: 'Built in', holdSettings: async () => [], close: () => void (state.closed += 1) };
       },
     },
-    device: { keepAwake: () => void (state.awake = true), letSleep: () => void (state.awake = false) },
+    device: {
+      now: () => ({ awake: state.awake, battery: { level: 0.2, charging: false }, hidden: false }),
+      keepAwake: () => void (state.awake = true),
+      letSleep: () => void (state.awake = false),
+    },
     shot: async () => new Blob(['picture'], { type: 'image/jpeg' }),
     send: async (token, _, ageS) => {
       if (state.refuse !== null) throw state.refuse;
@@ -114,4 +118,27 @@ test('a camera that opens after it was given up is closed at once', async () => 
   sender.closeCamera();
   await opening;
   expect([state.opens, state.closed, sender.view().camera.kind]).toEqual([1, 1, 'closed']);
+});
+
+test('what may end it is told while it sends: a battery that will not last', async () => {
+  const { sender, pass } = bench();
+  await sender.openCamera(null);
+  expect(sender.view().warnings).toEqual([]);
+  sender.begin();
+  await pass(500);
+  expect(sender.view().warnings).toEqual([
+    expect.stringMatching(/^On battery, 20.% left: it will not last the night\. Plug the device in\.$/),
+  ]);
+});
+
+test('a page that was loaded anew looks for its camera and goes on', async () => {
+  const { sender, state, sent, pass } = bench();
+  state.away = new Error('no camera');
+  sender.resume();
+  await pass(4_000, false);
+  expect([sender.view().camera.kind, sender.view().sending, sent]).toEqual(['lost', true, []]);
+  state.away = null;
+  await pass(8_000);
+  expect(sender.view().camera.kind).toBe('open');
+  expect(sent.length).toBeGreaterThan(0);
 });

@@ -40,3 +40,11 @@ export async function checksAnother(hand: Hand, nightUtcMs: number): Promise<voi
   await hand.taps('check-import');
   await hand.at('import-findings').scrollIntoViewIfNeeded();
 }
+
+/** Sends a file that the server does not take for the moment, so that it stays under way. */
+export async function sendsInVain(hand: Hand): Promise<void> {
+  await hand.page.route('**/api/labs/*/imports/*/content*', (route) => route.abort());
+  const buffer = Buffer.from(fileOf(Date.UTC(2031, 1, 14), (row) => row / 8));
+  await hand.at('file-input').setInputFiles({ name: 'under-way.csv', mimeType: 'text/csv', buffer });
+  await hand.at('upload-waiting').waitFor();
+}

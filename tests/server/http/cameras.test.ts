@@ -105,6 +105,13 @@ test('name and password go to the camera alone: no answer, no log of the lab tel
   const said = JSON.stringify([body, await at().list(), audit.body]);
   expect(said).toContain('camera.added');
   expect(said).not.toMatch(/shut-the-box|"lamp"/);
+  const kept = await at().lab.services.database.pool.query<{ password: string }>('select password from cameras where password is not null');
+  expect(kept.rows.map(({ password }) => password)).toEqual([expect.stringMatching(/^sealed:1:/)]);
+  at().camera.asked.length = 0;
+  await at().until(async () => {
+    await at().lab.as('viewer', 'GET', `${camerasPath}?look=true`).expect(200);
+    return at().camera.asked.some(({ headers }) => headers.authorization === `Basic ${btoa('lamp:shut-the-box')}`);
+  });
   await at().remove(body.camera.id as string);
   const { rows } = await at().lab.services.database.pool.query('select 1 from cameras where password is not null or user_name is not null');
   expect(rows).toEqual([]);

@@ -183,7 +183,7 @@ describe('start checks', () => {
     const report = await checks();
     const told = new Map(report.checks.map((one: Told) => [one.code, one]));
     expect([...told.keys()].sort()).toEqual(
-      'armed cautions clock data database disk free homed interlock link lock protocol soak still supply travel'.split(' '),
+      'armed cameras cautions clock data database disk free homed interlock link lock protocol soak still supply travel'.split(' '),
     );
     const value = (code: string, name: string) => figureOf(told.get(code) as Told, name) as number;
     expect(value('link', 'last reply')).toBeGreaterThanOrEqual(0);

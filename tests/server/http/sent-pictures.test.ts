@@ -2,6 +2,7 @@ import { randomBytes } from 'node:crypto';
 import request from 'supertest';
 import { demoIds } from '@/db/demo/seed';
 import type { CameraView, FrameView } from '@/shared/contracts/cameras';
+import type { StartCheck } from '@/shared/contracts/rigs';
 import { jpegOf } from '@/tests/support/camera-on-loopback';
 import { quickProtocol } from '@/tests/support/lab-server';
 import { asBytes, cameraLabOfThisFile, camerasPath } from './camera-lab';
@@ -34,6 +35,25 @@ describe('a camera whose pictures are sent', () => {
       .expect(401);
     await at().remove(made.id);
     expect((await push(secret, jpegOf('two')).expect(401)).body.detail).toMatch(/No camera has this token, or it was removed/);
+  });
+
+  test('is named before a start where it is silent; a start is not kept back by it', async () => {
+    const checked = async () => {
+      const query = `protocolId=${demoIds.shortProtocol}&revision=1`;
+      const { body } = await at().lab.as('viewer', 'GET', `/labs/${demoIds.lab}/rigs/${demoIds.rig}/start-checks?${query}`).expect(200);
+      return (body as { checks: StartCheck[] }).checks.find(({ code }) => code === 'cameras');
+    };
+    expect(await checked()).toMatchObject({ state: 'pass', detail: 'The camera gives pictures, as far as it was asked.' });
+    const { camera: made, secret } = await make('In the corner');
+    expect(await checked()).toMatchObject({
+      state: 'note',
+      detail: 'In the corner has sent no picture yet. The run goes on without its frames.',
+    });
+    await push(secret, jpegOf('now')).expect(204);
+    expect(await checked()).toMatchObject({ state: 'pass', detail: '2 cameras give pictures, as far as they were asked.' });
+    await at().lab.advance(61_000);
+    expect(await checked()).toMatchObject({ state: 'note', detail: expect.stringMatching(/^In the corner sent its last picture /) });
+    await at().remove(made.id);
   });
 
   test('keeps the picture before where what comes is none, too large, of another kind or too often', async () => {
