@@ -32,7 +32,8 @@ export function LivePanel({ view, channel }: { view: ReaderView; channel: string
             value={view.clockUMs === null ? 'not known' : `± ${formatSignificant(view.clockUMs, 2)}${NARROW_SPACE}ms`}
           />
           <Fact name="Stored" value={`${sender.buffer.stored} samples`} testID="spot-stored" />
-          <Fact name="Waiting" value={`${sender.buffer.held} samples, ${sender.kept} of them on the device`} testID="spot-waiting" />
+          <Fact name="Waiting" value={`${sender.buffer.held} samples`} testID="spot-waiting" />
+          <Fact name="Of them on the device" value={`${sender.kept} samples`} testID="spot-kept" />
         </View>
         <SenderWords view={view} channel={channel} />
       </Panel>

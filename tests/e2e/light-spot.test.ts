@@ -103,7 +103,7 @@ chapter('the network is cut and the page breaks down: another page sends what wa
   await hand.taps('begin-reading');
   await hand.at('end-reading').waitFor();
   await hand.context.setOffline(true);
-  const waiting = async () => Number(/(\d+) of them on the device/.exec(await hand.reads('spot-waiting', 'on the device'))?.[1]);
+  const waiting = async () => Number(/^(\d+) samples/.exec(await hand.reads('spot-kept', 'samples'))?.[1]);
   await until(async () => (await waiting()) >= 40, 'samples to wait on the device');
   await hand.reads('spot-trouble', /wait on this device and are sent again; it holds 432 000 of them/);
   await hand.shoots('light-spot-offline');
@@ -123,7 +123,8 @@ chapter('the network is cut and the page breaks down: another page sends what wa
   expect(times).toEqual([...new Set(times)].sort((a, b) => a - b));
   expect(times.filter((utcMs) => utcMs > cutAt - 60_000).length).toBeGreaterThanOrEqual(found);
   await hand.taps('end-reading');
-  await hand.reads('spot-waiting', /^0 samples, 0 of them on the device/);
+  await hand.reads('spot-waiting', /^0 samples/);
+  await hand.reads('spot-kept', /^0 samples/);
 });
 
 chapter('a token that is no token keeps the samples on the page and says so', async () => {
