@@ -1,10 +1,11 @@
 import type { Archive, ArchivedSeries } from '../archive/read-archive';
 import type { ChannelCalibration } from '../archive/run-records';
 import type { RingDownData } from '../statistics/ring-down';
+import { fineOffset } from './fine-offset';
 import { iterate } from './fit-rounds';
 import { ringDownStart, type RingDownStart } from '../statistics/ring-down-start';
 import { scaleOf, withZero, type ChannelScale } from './channel-scale';
-import { coarseOffset, fineOffset, type ClockOffset } from './clock-offset';
+import { coarseOffset, type ClockOffset } from './clock-offset';
 import { averagedAngles, reasonAgainstSamples, beginningOf, samplesIn, type DwellSamples } from './dwell-samples';
 import { dwellWindows, lengthS, type DwellWindow } from './dwell-windows';
 import { measuredOscillator, type FreeOscillator, type Known, type MeasuredOscillator } from './free-oscillator';

@@ -16,7 +16,7 @@ export interface ClockOffset {
   u: number;
 }
 
-interface Fitted {
+export interface Fitted {
   archive: Archive;
   segments: readonly Segment[];
   found: DwellFit | null;
@@ -26,7 +26,7 @@ interface Fitted {
 }
 
 /** The setting of the sources and the pendulum, with G of CODATA where the night gave none. */
-function settingOf({ free, system, solution }: Fitted): PendulumSetting | null {
+export function settingOf({ free, system, solution }: Fitted): PendulumSetting | null {
   if (system === null || system.geometry.pairs.length === 0) return null;
   const { inertiaKgM2, geometry } = system;
   const omega0Squared = solution?.omega0Squared ?? free.omega0Squared.value;
@@ -124,127 +124,4 @@ function restAt(data: readonly { atS: number; y: number }[], { lagS, fromS, peri
     if (error instanceof SingularMatrixError) return Infinity;
     throw error;
   }
-}
-
-const greatestGapS = 60;
-const rounds = 4;
-/** What the profile of a swing leaves open, s: with the rig's acceleration known, and with a guess. */
-const profileU = { known: 5e-4, guessed: 0.01 };
-
-/**
- * The fine search: the state at the end of each dwell, carried by the exact equation through the swing as the log times it, against the
- * state at the start of the next. Least squares over all swings; the uncertainty is their scatter, and never less than what they miss each
- * other by: shaped swings leave the pendulum nearly at rest, whenever they began, and tell little. Null with fewer than three swings.
- */
-export function fineOffset(fitted: Fitted): ClockOffset | null {
-  const setting = settingOf(fitted);
-  const turntable = turntableOf(fitted.archive.steps, fitted.archive.rig);
-  const passages = setting === null ? null : passagesOf(fitted, setting);
-  if (setting === null || turntable === null || passages === null || passages.length < 3) return null;
-  const omega = (2 * Math.PI) / setting.oscillator.periodS;
-  const missed = (passage: Passage, offsetS: number): [number, number] => {
-    const end = carried(setting, passage, (atS) => turntable.angleRad((passage.epochS + atS - offsetS) * 1000));
-    return [end.angleRad - passage.to.angleRad, (end.speedRadS - passage.to.speedRadS) / omega];
-  };
-  const missedAll = (offsetS: number) => passages.map((passage) => missed(passage, offsetS));
-  let offset = 0;
-  let misses = missedAll(0);
-  const unmoved = sumOfSquares(misses);
-  let [step, weight, scatter] = [0, 0, 0];
-  for (let round = 0; round < rounds; round += 1) {
-    const probeS = 0.05;
-    const later = missedAll(offset + probeS);
-    const each = misses.map((here, i) => {
-      const slope = here.map((value, k) => (((later[i] as number[])[k] as number) - value) / probeS) as [number, number];
-      return { pull: slope[0] * here[0] + slope[1] * here[1], weight: slope[0] ** 2 + slope[1] ** 2 };
-    });
-    weight = each.reduce((sum, one) => sum + one.weight, 0);
-    if (!(weight > 0)) return null;
-    const wanted = -each.reduce((sum, one) => sum + one.pull, 0) / weight;
-    scatter = scatterOf(each.map((one) => one.pull + one.weight * wanted));
-    [step, misses] = downhill(wanted, misses, (s) => missedAll(offset + s));
-    offset += step;
-    if (Math.abs(step) < 1e-6) break;
-  }
-  if (!Number.isFinite(offset)) return null;
-  const count = passages.length;
-  const variance = sumOfSquares(misses) / (2 * count - 1);
-  const gain = unmoved - sumOfSquares(misses);
-  const u = Math.max(
-    Math.sqrt((scatter * count) / (count - 1)) / weight,
-    Math.sqrt(variance / weight),
-    // Where the misfit is no parabola: how much worse no offset fits.
-    offset === 0 ? 0 : Math.abs(offset) * Math.sqrt(variance / gain),
-  );
-  return { value: offset, u: Math.hypot(u, profileU[fitted.archive.rig.motion === undefined ? 'guessed' : 'known'], logU(fitted)) };
-}
-
-type Misses = [number, number][];
-
-const sumOfSquares = (misses: Misses) => misses.reduce((sum, [a, b]) => sum + a * a + b * b, 0);
-
-/** As much of the wanted step as lessens the misfit, and the misfit there; none where nothing does. */
-function downhill(wanted: number, misses: Misses, missedAfter: (stepS: number) => Misses): [number, Misses] {
-  for (let share = 1; share > 0.01; share /= 2) {
-    const next = missedAfter(share * wanted);
-    if (sumOfSquares(next) < sumOfSquares(misses)) return [share * wanted, next];
-  }
-  return [0, misses];
-}
-
-/** Sum of squares, neighbours included where they add: a dwell's error shows in the swing before it and in the one after. */
-function scatterOf(deviations: readonly number[]): number {
-  const squares = deviations.reduce((sum, one) => sum + one * one, 0);
-  const neighbours = deviations.slice(1).reduce((sum, one, k) => sum + one * (deviations[k] as number), 0);
-  return squares + 2 * Math.max(0, neighbours);
-}
-
-/** The log's own uncertainty of its swings' times, of their mean. */
-function logU({ archive: { steps } }: Fitted): number {
-  const swings = steps.filter(({ kind }) => kind === 'swing');
-  return Math.sqrt(swings.reduce((sum, { uStartS }) => sum + uStartS * uStartS, 0)) / Math.max(1, swings.length);
-}
-
-interface State {
-  angleRad: number;
-  speedRadS: number;
-}
-
-/** From the last datum of one window to the start of the next, s after `epochS`. */
-interface Passage {
-  epochS: number;
-  from: State;
-  to: State;
-  lengthS: number;
-}
-
-function carried(setting: PendulumSetting, { from, lengthS }: Passage, phiAt: (atS: number) => number): State {
-  const pendulum = new Pendulum(setting, from);
-  pendulum.advanceTo(lengthS, phiAt);
-  return pendulum;
-}
-
-function passagesOf({ segments, found }: Fitted, setting: PendulumSetting): Passage[] {
-  const order = segments
-    .map((_, i) => i)
-    .sort((a, b) => (segments[a] as Segment).window.fromUtcMs - (segments[b] as Segment).window.fromUtcMs);
-  return order.slice(1).flatMap((next, k) => {
-    const [before, after] = [segments[order[k] as number] as Segment, segments[next] as Segment];
-    const lengthS = (after.window.fromUtcMs - before.window.toUtcMs) / 1000;
-    const starts = [found?.bias?.starts[order[k] as number], found?.bias?.starts[next]];
-    if (before.window.angleDeg === after.window.angleDeg || lengthS > greatestGapS + setting.oscillator.periodS) return [];
-    const [own, to] = [starts[0], starts[1]?.[0]];
-    if (own === undefined || to === undefined || own.length !== 1 || after.knocksS.length > 0) return [];
-    const spanS = (before.window.toUtcMs - before.window.fromUtcMs) / 1000;
-    const [restBefore, restAfter] = [restOf(before, setting), restOf(after, setting)];
-    const began = { angleRad: restBefore + (own[0]?.x ?? 0), speedRadS: own[0]?.v ?? 0 };
-    const phi = ((before.window.angleDeg ?? 0) * Math.PI) / 180;
-    const from = carried(setting, { epochS: 0, from: began, to: began, lengthS: spanS }, () => phi);
-    const end = { angleRad: restAfter + to.x, speedRadS: to.v };
-    return [{ epochS: before.window.toUtcMs / 1000, from: { ...from }, to: end, lengthS }];
-  });
-}
-
-function restOf({ window }: Segment, { geometry, oscillator, bigG }: PendulumSetting): number {
-  return equilibriumRad({ geometry, kappa: oscillator.kappa, bigG, phiRad: ((window.angleDeg ?? 0) * Math.PI) / 180 });
 }
