@@ -1,7 +1,6 @@
 import { demoIds } from '@/db/demo/seed';
-import { findOrMakeChannel } from '@/server/store/imports';
-import { createSampleStore } from '@/server/store/sample-store';
 import { countSamples, extremesOf } from '@/server/store/sample-summaries';
+import { fill, intervalMs, startUtcMs } from './lib/filled-channel';
 import { withDatabase, type BenchDatabase } from './lib/fresh-database';
 import { seedLab } from './lib/people';
 import { sizesOf } from './lib/sizes';
@@ -13,28 +12,10 @@ import { growth, quantile, report } from './report';
  */
 
 const sizes = sizesOf([100_000, 1_000_000, 10_000_000]);
-const startUtcMs = Date.UTC(2026, 0, 1);
-const intervalMs = 100;
-const aBatch = 100_000;
 const mostPoints = 4000;
 const parts = [1, 0.3, 0.1, 0.03, 0.01, 0.001];
 const viewsOfAPart = 12;
-const { lab: labId, rig: rigId } = demoIds;
-
-const valueOf = (index: number) => 2e-3 * Math.sin(index / 700) + 1e-7 * ((index * 7919) % 1000);
-
-async function fill({ connection }: BenchDatabase, size: number): Promise<string> {
-  const facts = { quantity: 'pendulum angle', unit: 'rad', role: 'deflection' as const, source: 'stream' as const, createdAt: startUtcMs };
-  const { id } = await findOrMakeChannel(connection.db, { ...facts, labId, rigId, runId: null, name: `of ${String(size)}` });
-  const store = createSampleStore(connection);
-  for (let from = 0; from < size; from += aBatch) {
-    const numbers = Float64Array.from({ length: Math.min(aBatch, size - from) }, (_, index) => from + index);
-    await store.append(labId, id, { utcMs: numbers.map((number) => startUtcMs + number * intervalMs), value: numbers.map(valueOf) });
-  }
-  await connection.pool.query('vacuum analyze sample_summaries');
-  await connection.pool.query('vacuum analyze samples');
-  return id;
-}
+const { lab: labId } = demoIds;
 
 type View = { labId: string; channelId: string; fromUtcMs: number; toUtcMs: number };
 
