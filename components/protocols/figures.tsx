@@ -1,19 +1,33 @@
 import { View } from 'react-native';
+import { UncertainText } from '@/components/evaluation/uncertain-text';
 import { Label, Num } from '@/components/ui';
-import { deflectionParts } from '@/shared/lib/format-angle';
 import { formatDuration } from '@/shared/lib/format-duration';
-import { formatPercent, formatSignificant } from '@/shared/lib/format-number';
+import { formatPercent } from '@/shared/lib/format-number';
 import { formatClock, zoneName } from '@/shared/lib/format-time';
+import { formatUncertain } from '@/shared/lib/format-uncertain';
 import type { NightForecast } from '@/shared/planning/night-forecast';
 import type { Plan } from './plan';
 
-const unsigned = (text: string) => text.replace(/^\+/, '');
-
-function signalWords(plan: Plan): { value: string; unit: string; label: string } {
-  if (plan.signal === null) return { value: '–', unit: '', label: 'near − far not predictable yet' };
-  const { number, unit } = deflectionParts(plan.signal.signalRad);
-  const mm = plan.signal.signalM === null ? '' : `, ${formatSignificant(plan.signal.signalM * 1000, 3)} mm`;
-  return { value: unsigned(number), unit, label: `near − far${mm}` };
+/** Predicted near minus far with the u that the rig's own leave it. */
+function Signal({ plan: { signal, signalU } }: { plan: Plan }) {
+  if (signal === null)
+    return (
+      <View>
+        <Num size={17} testID="signal">
+          –
+        </Num>
+        <Label>near − far not predictable yet</Label>
+      </View>
+    );
+  const of = (value: number, relative: number | undefined) => ({ value, u: relative === undefined ? null : Math.abs(value) * relative });
+  const onScale =
+    signal.signalM === null ? '' : `, ${formatUncertain({ ...of(signal.signalM * 1000, signalU?.onScale), unit: 'mm' }, { exponent: 0 })}`;
+  return (
+    <View>
+      <UncertainText size={17} {...of(signal.signalRad * 1e3, signalU?.angle)} unit="mrad" options={{ exponent: 0 }} testID="signal" />
+      <Label>near − far{onScale}</Label>
+    </View>
+  );
 }
 
 interface FiguresProps {
@@ -27,7 +41,6 @@ interface FiguresProps {
 /** Finish time, the largest; length, signal and u of G beside it. */
 export function Figures({ plan, forecast, timeZone, startAt }: FiguresProps) {
   const end = plan.timeline.endUtcMs;
-  const signal = signalWords(plan);
   const weekday = formatClock(end, { timeZone, weekday: true }).split(' ')[1] ?? '';
   return (
     <View className="flex-row flex-wrap items-start gap-x-6 gap-y-2">
@@ -57,12 +70,7 @@ export function Figures({ plan, forecast, timeZone, startAt }: FiguresProps) {
             <Label testID="most-time">{formatDuration(plan.mostS)} if conditions keep it waiting</Label>
           ) : null}
         </View>
-        <View>
-          <Num size={17} aside={signal.unit} testID="signal">
-            {signal.value}
-          </Num>
-          <Label>{signal.label}</Label>
-        </View>
+        <Signal plan={plan} />
         {forecast === null ? null : (
           <View>
             <Num size={17} testID="figure-u">

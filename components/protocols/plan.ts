@@ -4,6 +4,7 @@ import type { Surroundings } from '@/shared/protocol/advise-surroundings';
 import { checkProtocol } from '@/shared/protocol/check';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { Finding } from '@/shared/protocol/finding';
+import { predictedSignalU } from '@/shared/planning/budget-first';
 import { predictDeflection, predictSignal, type PredictedSignal } from '@/shared/protocol/predict';
 import { planTimeline, type Timeline, type TimelineItem } from '@/shared/protocol/timeline';
 import type { RigDocument } from '@/shared/rig/document';
@@ -31,6 +32,8 @@ export interface Plan {
   predicted: { x: number[]; y: number[] } | null;
   equilibrium: { x: number[]; y: number[] } | null;
   signal: PredictedSignal | null;
+  /** Its relative standard uncertainty by what the rig document says; null where that says none. */
+  signalU: ReturnType<typeof predictedSignalU>;
   /** Everything for which the protocol would be refused on this rig. */
   findings: Finding[];
   advice: Finding[];
@@ -44,6 +47,8 @@ export interface PlanInput {
   startUtcMs: number;
   /** What else is known; absent: nothing is said of it. */
   surroundings?: Surroundings;
+  /** What `signalUOf` says of the rig: it takes some milliseconds and does not change with the draft. */
+  signalU?: Plan['signalU'];
 }
 
 /** Points of a predicted curve: one for each pixel of a wide strip is plenty. */
@@ -102,6 +107,9 @@ function timelineOf({ document, rig, timeZone, startUtcMs }: PlanInput, conditio
   return planTimeline({ protocol: document, rig, timeZone, conditions }, { utcMs: startUtcMs, angleDeg: rig.motion?.homeDeg ?? 0 });
 }
 
+/** Relative standard uncertainty of the predicted near minus far; null where the rig document tells none. */
+export const signalUOf = (rig: RigDocument): Plan['signalU'] => orNull(() => predictedSignalU(rig));
+
 /** Everything the editor shows of a draft. Never throws: what cannot be told of a draft is left out. */
 export function makePlan(input: PlanInput): Plan {
   const { document, rig, timeZone, startUtcMs, surroundings } = input;
@@ -115,6 +123,7 @@ export function makePlan(input: PlanInput): Plan {
     predicted: curve === null ? null : { x: curve.utcMs, y: curve.rad },
     equilibrium: curve === null ? null : { x: curve.utcMs, y: curve.equilibriumRad },
     signal: orNull(() => predictSignal(rig)),
+    signalU: input.signalU ?? null,
     findings: checkProtocol(document, rig),
     advice: orNull(() => adviseProtocol(document, rig, start)) ?? [],
     spans: spansOf(timeline.items),

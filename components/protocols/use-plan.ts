@@ -4,7 +4,7 @@ import type { Surroundings } from '@/shared/protocol/advise-surroundings';
 import { nextOccurrenceUtcMs } from '@/shared/protocol/local-time';
 import type { ProtocolDocument } from '@/shared/protocol/document';
 import type { RigDocument } from '@/shared/rig/document';
-import { makePlan, type Plan } from './plan';
+import { makePlan, signalUOf, type Plan } from './plan';
 
 const minuteMs = 60_000;
 const thisMinute = () => Math.floor(serverNowMs() / minuteMs) * minuteMs;
@@ -36,8 +36,9 @@ export function usePlan({ document, rig, surroundings, timeZone, startAt }: Plan
     () => (startAt === '' ? minute : nextOccurrenceUtcMs({ localTime: startAt, timeZone, utcMs: minute })),
     [minute, startAt, timeZone],
   );
+  const signalU = useMemo(() => (rig === null ? null : signalUOf(rig)), [rig]);
   return useMemo(
-    () => (rig === null ? null : makePlan({ document: deferred, rig, surroundings, timeZone, startUtcMs })),
-    [deferred, rig, surroundings, timeZone, startUtcMs],
+    () => (rig === null ? null : makePlan({ document: deferred, rig, surroundings, timeZone, startUtcMs, signalU })),
+    [deferred, rig, surroundings, timeZone, startUtcMs, signalU],
   );
 }

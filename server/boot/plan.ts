@@ -1,6 +1,7 @@
 import { parseArgs } from 'node:util';
 import { adviseNight } from '@/shared/planning/advise-night';
 import { peakExcursionRad } from '@/shared/planning/excursion';
+import { predictedSignalU } from '@/shared/planning/budget-first';
 import { uIsPlanned } from '@/shared/planning/planned-method';
 import { predictU } from '@/shared/planning/plan-uncertainty';
 import { alternatives, cadenceOf, type Alternative } from '@/shared/planning/strategies';
@@ -24,8 +25,11 @@ export interface Plan {
   duration_s: number;
   /** Near minus far, rad; null where the rig does not tell. */
   signal_rad: number | null;
+  /** Standard uncertainty that the stated ones of the rig leave it; null where they leave none. */
+  signal_u_rad: number | null;
   /** The same on the scale, m. */
   signal_m: number | null;
+  signal_u_m: number | null;
   /** Of G after the night by near minus far; null where the rig or the protocol does not tell, or another method is registered (`u-not-planned`). */
   relativeU: number | null;
   u_by_source: Record<string, number> | null;
@@ -45,6 +49,7 @@ export function makePlan(document: ProtocolDocument, rig: RigDocument): Plan {
   if (refusals.length > 0) throw new Unusable(`The protocol "${document.name}" is refused:\n${listed(refusals)}`);
   const timeline = planTimeline({ protocol: document, rig, timeZone: 'UTC' }, start);
   const signal = predictSignal(rig);
+  const signalU = predictedSignalU(rig);
   const cadence = cadenceOf(timeline, rig);
   const predicted = cadence === null || !uIsPlanned(document) ? null : predictU(rig, cadence);
   const others = alternatives(rig, { durationS: timeline.durationS, calibrations: cadence?.calibrations ?? [] });
@@ -52,7 +57,9 @@ export function makePlan(document: ProtocolDocument, rig: RigDocument): Plan {
   return {
     duration_s: Math.round(timeline.durationS * 1e6) / 1e6,
     signal_rad: signal?.signalRad ?? null,
+    signal_u_rad: uOf(signal?.signalRad, signalU?.angle),
     signal_m: signal?.signalM ?? null,
+    signal_u_m: uOf(signal?.signalM, signalU?.onScale),
     relativeU: predicted?.relativeU ?? null,
     u_by_source: predicted?.bySource ?? null,
     advice: [...adviseProtocol(document, rig, start), ...adviseNight(rig, { predicted, peakRad: peak })],
@@ -61,6 +68,9 @@ export function makePlan(document: ProtocolDocument, rig: RigDocument): Plan {
     alternatives: others,
   };
 }
+
+const uOf = (value: number | null | undefined, relative: number | undefined): number | null =>
+  value == null || relative === undefined ? null : Math.abs(value) * relative;
 
 function chosen(args: readonly string[]): Choice {
   const { values, positionals } = parsedArguments(args);

@@ -44,6 +44,17 @@ export function budgetFirst(rig: RigDocument): BudgetFirst | null {
   return { relativeU, measurements };
 }
 
+/**
+ * Relative standard uncertainty of the near minus far that a rig document predicts with the G of CODATA 2022, as an angle and on the scale, where the
+ * lever's counts too: what moves G at a given deflection moves the deflection at a given G by as much, to 1 %. Null as above.
+ */
+export function predictedSignalU(rig: RigDocument): { angle: number; onScale: number } | null {
+  const budget = budgetFirst(rig);
+  if (budget === null) return null;
+  const ofPendulum = budget.measurements.filter(({ inputs }) => !inputs.some((input) => input.startsWith('lever.')));
+  return { angle: Math.hypot(0, ...ofPendulum.map(({ relativeU }) => relativeU)), onScale: budget.relativeU };
+}
+
 function worthOf({ relativeU: own, halved }: BudgetPart, all: number): Omit<MeasurementShare, 'source' | 'inputs'> {
   const rest = Math.max(0, all ** 2 - own ** 2);
   return { relativeU: own, share: (own / all) ** 2, relativeUIfHalved: Math.sqrt(rest + halved ** 2) };

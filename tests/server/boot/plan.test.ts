@@ -52,6 +52,8 @@ test('a template: all the keys of the format', () => {
     'relativeU',
     'signal_m',
     'signal_rad',
+    'signal_u_m',
+    'signal_u_rad',
     'u_by_source',
   ]);
   expect(result?.['advice']).toEqual([]);
@@ -70,6 +72,8 @@ test('a template: all the keys of the format', () => {
   expect(result?.['duration_s']).toBeLessThan(10_089 + 3.5 * 420 + 10);
   // 2.3738257e-3 rad at the greatest torque of rig W (design reference A4), which is flat there; the spot moves 4 × 5 m times as far.
   expect(((result?.['signal_rad'] as number) / 0.002373825686861 - 1) ** 2).toBeLessThan(1e-12);
+  // The orbit leaves 0.38 % of it open, the arm 0.11 %, period and decay little.
+  expect((result?.['signal_u_rad'] as number) / 0.002373825686861).toBeCloseTo(0.004, 3);
   expect(((result?.['signal_m'] as number) / (20 * 0.002373825686861) - 0.5) ** 2).toBeLessThan(1e-8);
 });
 
@@ -119,7 +123,9 @@ test('what the rig does not tell is null', () => {
   const unmeasured = { ...demoRigWide, measured: undefined };
   expect(plan(file('short.json', protocol(steps)), '--rig', file('unmeasured.json', unmeasured)).plan).toMatchObject({
     signal_rad: null,
+    signal_u_rad: null,
     signal_m: null,
+    signal_u_m: null,
     relativeU: null,
     u_by_source: null,
     bestDwell_s: null,

@@ -1,5 +1,6 @@
-import { budgetFirst } from '@/shared/planning/budget-first';
-import { demoRigWide } from '@/shared/rig/demo-rigs';
+import { budgetFirst, predictedSignalU } from '@/shared/planning/budget-first';
+import { predictSignal } from '@/shared/protocol/predict';
+import { demoRigNarrow, demoRigWide } from '@/shared/rig/demo-rigs';
 import type { RigDocument } from '@/shared/rig/document';
 import { withRig } from '../../support/reference-rigs';
 
@@ -60,4 +61,42 @@ test('no night makes it smaller, and what shares its error stands together', () 
 test('a rig without sources, without a measured period or without any u has none', () => {
   expect(budgetFirst(withRig(demoRigWide, (r) => void (r.sources = { shape: 'none', count: 2 })))).toBeNull();
   expect(budgetFirst(withRig(demoRigWide, (r) => delete r.measured))).toBeNull();
+});
+
+describe.each([
+  ['wide', demoRigWide],
+  ['close', demoRigNarrow],
+])('the predicted near minus far of the %s demo rig', (_name, rig) => {
+  interface Known {
+    value: number;
+    u: number;
+  }
+  const quantities = (node: unknown): Known[] =>
+    typeof node !== 'object' || node === null
+      ? []
+      : 'u' in node && 'value' in node
+        ? [node as Known]
+        : Object.values(node).flatMap(quantities);
+
+  test.each([
+    ['angle', 'signalRad'],
+    ['onScale', 'signalM'],
+  ] as const)('has, as %s, the u that comes of moving each quantity of the document by its u', (which, of) => {
+    const parts = (['pendulum', 'sources', 'stations', 'lever', 'measured'] as const).filter((part) => rig[part] !== undefined);
+    const signal = predictSignal(rig)?.[of] ?? NaN;
+    const moved = parts.flatMap((part) =>
+      quantities(rig[part]).map((_, k) => {
+        const at = (side: 1 | -1) =>
+          predictSignal(
+            withRig(rig, (r) => {
+              const one = quantities(r[part])[k] as Known;
+              one.value += side * one.u;
+            }),
+          )?.[of] ?? NaN;
+        return (at(1) - at(-1)) / 2 / signal;
+      }),
+    );
+    expect(Math.hypot(...moved) / (predictedSignalU(rig)?.[which] ?? NaN)).toBeCloseTo(1, 1);
+    expect(Math.hypot(...moved)).toBeGreaterThan(1e-3);
+  });
 });
