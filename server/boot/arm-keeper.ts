@@ -2,12 +2,15 @@ import type { Logger } from 'pino';
 import type { ArmRequest } from '../engine/arming';
 import type { ArmKeeper, EndedArm, StandingArm } from '../interfaces/arm-keeper';
 import type { Clock } from '../interfaces/clock';
+import type { ArmEnd, StandingEntry, StandingJournal } from '../interfaces/standing-journal';
 import { armRig, currentArm, endArm, newestArm } from '../store/arms';
 import { appendAudit } from '../store/audit';
 import type { Connection } from '../store/database';
+import { UntilStored } from './until-stored';
 
 interface Parts {
   database: Connection;
+  standing: StandingJournal;
   clock: Clock;
   log: Logger;
   sha256(text: string): string;
@@ -16,18 +19,19 @@ interface Parts {
   onChange(rigId: string): void;
 }
 
-const retryMs = 5_000;
-
 /** Arms in memory and in the database. Ending one takes effect here at once, whether or not the database answers. */
 export class MemoryArmKeeper implements ArmKeeper {
   private readonly arms = new Map<string, StandingArm>();
   private readonly ended = new Map<string, EndedArm>();
-  private closed = false;
+  private readonly unstored: UntilStored<Extract<StandingEntry, { kind: 'arm-ended' }>>;
 
-  constructor(private readonly parts: Parts) {}
+  constructor(private readonly parts: Parts) {
+    this.unstored = new UntilStored({ ...parts, kind: 'arm-ended', what: 'the end of an arm', store: ({ end }) => this.store(end) });
+  }
 
-  /** Reads the arm of a rig that is taken up. */
+  /** Reads the arm of a rig that is taken up; an end that a process before this one could not store counts. */
   async load(rig: { labId: string; rigId: string }): Promise<void> {
+    await this.unstored.settle(rig.rigId);
     const arm = await newestArm(this.parts.database.db, rig);
     if (arm === null) return;
     const { id, name, note, fromAt: fromUtcMs, untilAt: untilUtcMs, bootId, endedAt, endedWhy } = arm;
@@ -81,38 +85,28 @@ export class MemoryArmKeeper implements ArmKeeper {
     const arm = this.armOf(rig.rigId);
     if (arm === null) return;
     this.arms.delete(rig.rigId);
-    this.ended.set(rig.rigId, { name: arm.name, why, atUtcMs: this.parts.clock.utcMs() });
-    this.parts.onChange(rig.rigId);
-    this.parts.background(this.store(rig, { armId: arm.id, why, by, atUtcMs: this.parts.clock.utcMs() }), 'the end of an arm');
+    const { labId, rigId } = rig;
+    const atUtcMs = this.parts.clock.utcMs();
+    this.ended.set(rigId, { name: arm.name, why, atUtcMs });
+    this.parts.onChange(rigId);
+    this.unstored.add({ kind: 'arm-ended', end: { armId: arm.id, labId, rigId, why, by: { id: by.id, name: by.name }, atUtcMs } });
+  }
+
+  kept(): Promise<void> {
+    return this.unstored.kept();
   }
 
   close(): void {
-    this.closed = true;
+    this.unstored.close();
   }
 
-  /** Tries until it is stored: an arm that ended must not stand again after a restart. */
-  private async store(
-    rig: { labId: string; rigId: string },
-    end: { armId: string; why: string; by: { id: string | null; name: string }; atUtcMs: number },
-  ): Promise<void> {
-    const { database, clock, log, sha256 } = this.parts;
-    while (!this.closed) {
-      try {
-        await database.db.transaction(async (tx) => {
-          const standing = await currentArm(tx, { ...rig, nowUtcMs: end.atUtcMs });
-          if (standing?.id !== end.armId) return;
-          await endArm(tx, { ...rig, nowUtcMs: end.atUtcMs, why: end.why });
-          await appendAudit(
-            tx,
-            { labId: rig.labId, who: end.by, kind: 'rig.arm-ended', data: { rigId: rig.rigId, why: end.why }, utcMs: end.atUtcMs },
-            sha256,
-          );
-        });
-        return;
-      } catch (error) {
-        log.warn({ err: error, rigId: rig.rigId }, 'the end of an arm is not stored yet');
-        await new Promise<void>((resolve) => void clock.after(retryMs, resolve));
-      }
-    }
+  private async store({ armId, labId, rigId, why, by, atUtcMs }: ArmEnd): Promise<void> {
+    const { database, sha256 } = this.parts;
+    await database.db.transaction(async (tx) => {
+      const standing = await currentArm(tx, { labId, rigId, nowUtcMs: atUtcMs });
+      if (standing?.id !== armId) return;
+      await endArm(tx, { labId, rigId, nowUtcMs: atUtcMs, why });
+      await appendAudit(tx, { labId, who: by, kind: 'rig.arm-ended', data: { rigId, why }, utcMs: atUtcMs }, sha256);
+    });
   }
 }

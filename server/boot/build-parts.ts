@@ -2,6 +2,7 @@ import type { Logger } from 'pino';
 import type { Clock } from '../interfaces/clock';
 import type { HeavyTasks } from '../interfaces/heavy-tasks';
 import type { RunJournals } from '../interfaces/run-journal';
+import type { StandingJournal } from '../interfaces/standing-journal';
 import type { MailPort } from '../interfaces/mail';
 import type { ObjectStore } from '../interfaces/object-store';
 import type { OutgoingPort } from '../interfaces/outgoing';
@@ -38,6 +39,7 @@ export interface BuildOverrides {
   exitDelayMs?: number;
   /** Where runs write while the database is away; default: files of the state folder. */
   journals?: RunJournals;
+  standing?: StandingJournal;
   /** Free disk, bytes. */
   freeBytes?: () => Promise<number | null>;
   /** The post of a process that does not play all roles; default: through the database. */

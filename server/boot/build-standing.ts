@@ -1,3 +1,4 @@
+import { join } from 'node:path';
 import type { Logger } from 'pino';
 import { Arming } from '../engine/arming';
 import type { GuidedMoves } from '../engine/guided-moves';
@@ -9,6 +10,7 @@ import { MemoryArmKeeper } from './arm-keeper';
 import type { Background } from './background';
 import type { BuildParts } from './build-parts';
 import { MemoryLockKeeper } from './lock-keeper';
+import { StandingFiles } from './standing-files';
 
 export const engineItself = { id: null, name: 'the run engine' };
 
@@ -26,8 +28,9 @@ export function buildStanding(
   parts: BuildParts,
   { log, background, onLine, stationOf, supervisor, guided }: Around,
 ): { arms: MemoryArmKeeper; arming: Arming; locks: MemoryLockKeeper } {
-  const { engineDatabase: database = parts.database, clock } = parts;
+  const { engineDatabase: database = parts.database, clock, overrides = {} } = parts;
   const kept = {
+    standing: overrides.standing ?? new StandingFiles(join(parts.config.stateDir, 'standing')),
     ...{ database, clock, log, sha256: sha256Hex, onChange: onLine },
     background: (work: Promise<unknown>, what: string) => background.add(work, what),
   };

@@ -2,12 +2,15 @@ import { randomUUID } from 'node:crypto';
 import type { Logger } from 'pino';
 import type { Clock } from '../interfaces/clock';
 import type { LockKeeper, PersonalLock } from '../interfaces/lock-keeper';
+import type { StandingEntry, StandingJournal } from '../interfaces/standing-journal';
 import { appendAudit } from '../store/audit';
 import type { Connection } from '../store/database';
 import { insertLock, standingLocks } from '../store/locks';
+import { UntilStored } from './until-stored';
 
 interface Parts {
   database: Connection;
+  standing: StandingJournal;
   clock: Clock;
   log: Logger;
   sha256(text: string): string;
@@ -18,17 +21,18 @@ interface Parts {
   onChange(rigId: string): void;
 }
 
-const retryMs = 5_000;
-
 /** Locks in memory and in the database. Setting one takes effect here at once, whether or not the database answers. */
 export class MemoryLockKeeper implements LockKeeper {
   private readonly locks = new Map<string, PersonalLock[]>();
-  private closed = false;
+  private readonly unstored: UntilStored<Extract<StandingEntry, { kind: 'lock-set' }>>;
 
-  constructor(private readonly parts: Parts) {}
+  constructor(private readonly parts: Parts) {
+    this.unstored = new UntilStored({ ...parts, kind: 'lock-set', what: 'a personal lock', store: ({ lock }) => this.store(lock) });
+  }
 
-  /** Reads the locks of a rig that is taken up. */
+  /** Reads the locks of a rig that is taken up, those too that a process before this one could not store. */
   async load({ labId, rigId }: { labId: string; rigId: string }): Promise<void> {
+    await this.unstored.settle(rigId);
     const rows = await standingLocks(this.parts.database.db, { labId, rigId });
     this.locks.set(
       rigId,
@@ -56,7 +60,7 @@ export class MemoryLockKeeper implements LockKeeper {
     this.locks.set(lock.rigId, [...standing, lock]);
     this.parts.onSet(lock);
     this.parts.onChange(lock.rigId);
-    this.parts.background(this.store(lock), 'a personal lock');
+    this.unstored.add({ kind: 'lock-set', lock });
     return lock;
   }
 
@@ -68,26 +72,21 @@ export class MemoryLockKeeper implements LockKeeper {
     this.parts.onChange(rigId);
   }
 
-  close(): void {
-    this.closed = true;
+  kept(): Promise<void> {
+    return this.unstored.kept();
   }
 
-  /** Tries until it is stored: a lock must not be gone after a restart. */
+  close(): void {
+    this.unstored.close();
+  }
+
   private async store(lock: PersonalLock): Promise<void> {
-    const { database, clock, log, sha256 } = this.parts;
+    const { database, sha256 } = this.parts;
     const { labId, rigId, userId, name, note, setUtcMs } = lock;
-    while (!this.closed) {
-      try {
-        await database.db.transaction(async (tx) => {
-          if (!(await insertLock(tx, { id: lock.id, labId, rigId, userId, name, note, setAt: setUtcMs }))) return;
-          const data = { rigId, lockId: lock.id, note };
-          await appendAudit(tx, { labId, who: { id: userId, name }, kind: 'rig.lock-set', data, utcMs: setUtcMs }, sha256);
-        });
-        return;
-      } catch (error) {
-        log.warn({ err: error, rigId }, 'a personal lock is not stored yet');
-        await new Promise<void>((resolve) => void clock.after(retryMs, resolve));
-      }
-    }
+    await database.db.transaction(async (tx) => {
+      if (!(await insertLock(tx, { id: lock.id, labId, rigId, userId, name, note, setAt: setUtcMs }))) return;
+      const data = { rigId, lockId: lock.id, note };
+      await appendAudit(tx, { labId, who: { id: userId, name }, kind: 'rig.lock-set', data, utcMs: setUtcMs }, sha256);
+    });
   }
 }

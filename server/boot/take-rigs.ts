@@ -63,6 +63,8 @@ export class RigTaking {
       if ((await leases.epochOf(key)) === null) return;
       await arms.load(key);
       await locks.load(key);
+      // Whoever was stopped between the two: no arm stands where hands are in the rig.
+      for (const { userId, name } of locks.locksOf(rig.id).slice(0, 1)) arms.end(key, `${name} set a personal lock`, { id: userId, name });
       await stations.put(rig);
     } catch (error) {
       if (isPassing(error)) throw error;

@@ -24,4 +24,6 @@ export interface ArmKeeper {
   endedOf(rigId: string): EndedArm | null;
   /** Ends the arm at once, and in the database as soon as it can be reached. */
   end(rig: { labId: string; rigId: string }, why: string, by: { id: string | null; name: string }): void;
+  /** Resolves when all that took effect here is on this computer's disk, or cannot be. */
+  kept(): Promise<void>;
 }

@@ -19,4 +19,6 @@ export interface LockKeeper {
   set(lock: Omit<PersonalLock, 'id'>): PersonalLock;
   /** Takes one away after that was stored. */
   lifted(rigId: string, lockId: string): void;
+  /** Resolves when all that took effect here is on this computer's disk, or cannot be. */
+  kept(): Promise<void>;
 }

@@ -8,6 +8,7 @@ import { buildServer, type BuiltServer } from '@/server/boot/build-server';
 import { MemoryJournals } from '@/server/engine/memory-journal';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import type { RigStation, StationRig } from '@/server/interfaces/rig-stations';
+import type { StandingJournal } from '@/server/interfaces/standing-journal';
 import type { ServerConfig } from '@/server/interfaces/server-config';
 import { resumeSubject, startSubject } from '@/server/http/reviews';
 import { createSimulatedController, type SimulatedController } from '@/server/links/simulated-controller';
@@ -17,6 +18,7 @@ import type { ProtocolDocument } from '@/shared/protocol/document';
 import { cautionsVersion } from '@/shared/rig/cautions';
 import type { TestDatabase } from './database';
 import { MemoryObjects } from './memory-objects';
+import { MemoryStanding } from './memory-standing';
 
 export const sha256 = (text: string) => createHash('sha256').update(text).digest('hex');
 
@@ -34,11 +36,7 @@ export const testConfig = (database: TestDatabase, changes: Partial<ServerConfig
   mode: 'test',
   roles: ['web', 'rig', 'worker'],
   databaseUrl: database.url,
-  host: '127.0.0.1',
-  port: 0,
-  publicUrl: null,
-  trustedProxies: 0,
-  demo: true,
+  ...{ host: '127.0.0.1', port: 0, publicUrl: null, trustedProxies: 0, demo: true },
   ...{ virtualExitDelayS: 5, watchdogS: 3 },
   stateDir: tmpdir(),
   ...{ webDir: null, filesDir: tmpdir(), databaseDir: null, s3: null, secretKey: 'the key of the servers of tests: no secret' },
@@ -63,6 +61,7 @@ export class World {
   private readonly controllers = new Map<string, SimulatedController>();
   readonly clock: VirtualClock;
   readonly journals = new MemoryJournals();
+  readonly standing: StandingJournal = new MemoryStanding();
 
   constructor(startUtcMs: number = eveningUtcMs) {
     this.clock = new VirtualClock(startUtcMs, () => this.settle());
@@ -127,7 +126,7 @@ export class LabServer {
       overrides: {
         tasks: heavyTasks,
         controllerOf: world.controllerOf,
-        journals: world.journals,
+        ...{ journals: world.journals, standing: world.standing },
         ...{ ticks: false, paceMs: 30_000, objects: new MemoryObjects() },
         ...options.overrides,
       },

@@ -9,6 +9,7 @@ import { findRig, type RigRecord } from '@/server/store/rigs';
 import { audited } from '../audited';
 import { atTheRig, rigOfAddress } from '../desk/at-the-rig';
 import { isoOf } from '../maker';
+import { safeOnDisk } from '../safe-on-disk';
 import { notFound, ProblemError } from '../problem-error';
 import { armingViewOf, lockViewOf, signatureViewOf } from '../rig-view';
 import { mount, type Membership, type SignedIn } from '../route-context';
@@ -94,6 +95,7 @@ const armRoutes = [
     }
     if (services.arms.armOf(rig.id) === null) throw new ProblemError('not-found', `${rig.name} is not armed.`);
     services.arms.end({ labId: rig.labId, rigId: rig.id }, `disarmed by ${me.name}`, { id: me.userId, name: me.name });
+    await safeOnDisk(services.arms.kept(), services.clock);
     return undefined;
   }),
 
@@ -180,7 +182,10 @@ const setLockRoutes = [
     // A rig with a line is known without the database: hands come first.
     const rigId = services.stations.get(params.rigId)?.labId === labId ? params.rigId : (await load(context, params.rigId)).id;
     const setUtcMs = services.clock.utcMs();
-    return lockViewOf(services.locks.set({ labId, rigId, userId: me.userId, name: me.name, note: body.note, setUtcMs }));
+    const lock = services.locks.set({ labId, rigId, userId: me.userId, name: me.name, note: body.note, setUtcMs });
+    // The lock, and the end of the arm that it brings.
+    await safeOnDisk(Promise.all([services.locks.kept(), services.arms.kept()]), services.clock);
+    return lockViewOf(lock);
   }),
 ];
 

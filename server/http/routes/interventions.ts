@@ -8,7 +8,6 @@ import type { RigDocument } from '@/shared/rig/document';
 import { resumePlan, skipPlan, type RemainingPlan } from '@/server/engine/remaining-plan';
 import type { RunDriver } from '@/server/engine/run-driver';
 import type { Answer } from '@/server/engine/run-driver-parts';
-import type { Clock } from '@/server/interfaces/clock';
 import { StaleRunError } from '@/server/interfaces/run-store';
 import { isPassing } from '@/server/store/failures';
 import { findRevision } from '@/server/store/protocols';
@@ -20,21 +19,12 @@ import { atTheRig, rigOfAddress, rigOfItsRun } from '../desk/at-the-rig';
 import { isoOf } from '../maker';
 import { notFound, ProblemError } from '../problem-error';
 import { mount, type SignedIn } from '../route-context';
+import { atMost, safeOnDisk } from '../safe-on-disk';
 import { resumeSubject, skipSubject, startSubject } from '../reviews';
 import { loadRun, tellStored } from '../run-view';
 import type { Services } from '../services';
 
 const longestWaitMs = 20_000;
-
-/** Waits for something, but no longer than this. */
-async function atMost(longestMs: number, awaited: Promise<unknown>, clock: Clock): Promise<void> {
-  let cancel = () => undefined as void;
-  const longest = new Promise<void>((resolve) => {
-    cancel = clock.after(longestMs, resolve);
-  });
-  await Promise.race([awaited, longest]);
-  cancel();
-}
 
 /** The driver of a run; for one that is over, or that nobody drives, the reason why nothing can be done with it. */
 async function driverOf(services: Services, labId: string, runId: string): Promise<RunDriver> {
@@ -57,12 +47,10 @@ async function driverOf(services: Services, labId: string, runId: string): Promi
   throw new ProblemError('not-possible-now', `${why} Use the switch at the rig if anything moves.`);
 }
 
-const longestKeepingMs = 1_000;
-
 /** The controller has it already; the answer waits until it is safe on a disk, so that nothing that was answered can be forgotten. */
 async function accepted({ clock }: Services, runId: string, answer: Answer): Promise<{ runId: string; serverAt: string }> {
   if (!answer.ok) throw new ProblemError('not-possible-now', answer.why);
-  if (answer.kept !== undefined) await atMost(longestKeepingMs, answer.kept, clock);
+  if (answer.kept !== undefined) await safeOnDisk(answer.kept, clock);
   return { runId, serverAt: isoOf(answer.serverAtUtcMs) };
 }
 
