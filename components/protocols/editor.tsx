@@ -37,6 +37,8 @@ export function Editor({ protocol, etag }: EditorProps) {
     mayWrite,
   });
   useAdopted({ protocol, etag, sync, put: state.putDocument });
+  // What was read of the protocol is about the draft of its ETag: one that was saved since differs until it is read again.
+  const shown = sync.state.etag === etag ? protocol : { ...protocol, draftDiffers: true };
   const planning = usePlanningRig();
   const surroundings = useSurroundings(planning.rig);
   const [startAt, setStartAt] = useState('');
@@ -56,11 +58,11 @@ export function Editor({ protocol, etag }: EditorProps) {
         title={state.document.name}
         back={{ href: '/protocols', label: 'protocols' }}
         testID="editor"
-        trailing={<EditorTrailing protocol={protocol} status={sync.state.status} onOpen={setSheet} />}
+        trailing={<EditorTrailing protocol={shown} status={sync.state.status} onOpen={setSheet} />}
         asideOnlyWide
         footerGivesWay
         aside={<EditorAside {...details} />}
-        footer={mayWrite ? <EditorFooter protocol={protocol} status={sync.state.status} onOpen={setSheet} /> : undefined}
+        footer={mayWrite ? <EditorFooter protocol={shown} status={sync.state.status} onOpen={setSheet} /> : undefined}
       >
         <EditorMain sync={sync} startAt={startAt} planning={planning} restored={begin.backup !== null} />
       </Screen>

@@ -8,6 +8,16 @@ beforeEach(() => {
 });
 afterEach(() => jest.useRealTimers());
 
+test('a draft that was changed since its revision is offered to be issued, also once it is saved, and never the start of what it was', async () => {
+  await openEditor('operator', begun, { issued: true });
+  expect(screen.queryByTestId('issue')).toBeNull();
+  fireEvent.click(row('1'));
+  tap('move-down');
+  await afterQuiet();
+  expect(screen.getByTestId('issue').textContent).toBe('Issue rev 2');
+  expect(screen.queryByText('Start')).toBeNull();
+});
+
 describe('by touch', () => {
   test('a step is taken in hand, moved, duplicated, deleted, and each is undone', async () => {
     await openEditor();

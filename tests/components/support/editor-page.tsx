@@ -59,7 +59,12 @@ export interface EditorPage {
   saveByOther: (document: ProtocolDocument) => void;
 }
 
-export async function openEditor(role: Role = 'operator', document: ProtocolDocument = begun): Promise<EditorPage> {
+/** `issued`: the draft that the page begins with is revision 1. */
+export async function openEditor(
+  role: Role = 'operator',
+  document: ProtocolDocument = begun,
+  { issued = false } = {},
+): Promise<EditorPage> {
   const lab = startFakeLab(role);
   let held = document;
   let version = 1;
@@ -69,8 +74,8 @@ export async function openEditor(role: Role = 'operator', document: ProtocolDocu
     name: held.name,
     updatedAt: '2031-03-14T08:00:00Z',
     updatedBy: by,
-    latestRevision: null,
-    draftDiffers: true,
+    latestRevision: issued ? 1 : null,
+    draftDiffers: !issued || held !== document,
     stepCount: held.steps.length,
     document: held,
     revisions: [],
