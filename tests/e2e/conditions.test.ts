@@ -9,6 +9,7 @@ import { issued, read, started } from './support/night';
 jest.setTimeout(90_000);
 const lab = labOfThisFile();
 let hand: Hand;
+let desk: Hand;
 let runId: string;
 const tell = chapters(() => hand);
 
@@ -37,36 +38,50 @@ const waiting: ProtocolDocument = {
 
 beforeAll(async () => {
   hand = new Hand(await lab().open('phone', 'owner'));
+  desk = new Hand(await lab().open('wide', 'owner'));
   await lab().server.arm(20);
   const protocol = await issued(lab(), waiting);
   runId = await started(lab(), protocol);
 }, 60_000);
-afterAll(() => expect(hand.browser.errors).toEqual([]));
+afterAll(() => expect([hand, desk].flatMap(({ browser }) => browser.errors)).toEqual([]));
+
+/** What the phone shows, the desk shows too. */
+const bothSee = async (look: (each: Hand) => Promise<void>) => {
+  for (const each of [hand, desk]) {
+    await each.goes(`/runs/${runId}`, 'run-screen');
+    await look(each);
+  }
+};
+const bothLookAway = () => Promise.all([hand.looksAway(), desk.looksAway()]);
 
 tell('the pendulum is waited for: value, limit, and time left until it gives up', async () => {
   await lab().pass(500);
-  await hand.goes(`/runs/${runId}`, 'run-screen');
-  await hand.reads('waiting', /Until the pendulum is calm.*amplitude.*µrad.*below 30.*not yet.*drift.*below 800 µrad\/h/);
-  await hand.reads('gives-up', /Gives up at \d\d:\d\d, in \d+ min.*: then the run goes on all the same\./);
-  await hand.shoots('waiting-calm');
+  await bothSee(async (each) => {
+    await each.reads('waiting', /Until the pendulum is calm.*amplitude.*µrad.*below 30.*not yet.*drift.*below 800 µrad\/h/);
+    await each.reads('gives-up', /Gives up at \d\d:\d\d, in \d+ min.*: then the run goes on all the same\./);
+    await each.shoots('waiting-calm');
+  });
 });
 
 tell('good dwells are counted, and what the run has reached is shown', async () => {
-  await hand.looksAway();
+  await bothLookAway();
   await lab().pass(1800 + 4 * 420);
-  await hand.goes(`/runs/${runId}`, 'run-screen');
-  await hand.reads('reached', /\d of \d.*dwells good.*mrad.*near − far so far.*%.*u reached/);
-  await hand.shoots('u-reached');
+  await bothSee(async (each) => {
+    await each.reads('reached', /\d of \d.*dwells good.*mrad.*near − far so far.*%.*u reached/);
+    await each.shoots('u-reached');
+  });
 });
 
 tell('a prompt disarms the rig; it is confirmed when the rig was armed again', async () => {
-  await hand.looksAway();
+  await bothLookAway();
   await lab().pass(1700);
-  await hand.goes(`/runs/${runId}`, 'run-screen');
-  await hand.reads('waiting', 'Turn the balls by 90° and close the case');
-  await hand.reads('confirm-why', /Arm it again at the rig, then confirm/);
-  expect(await hand.isEnabled('confirm-prompt')).toBe(false);
-  await hand.shoots('prompt');
+  await bothSee(async (each) => {
+    await each.reads('waiting', 'Turn the balls by 90° and close the case');
+    await each.reads('confirm-why', /Arm it again at the rig, then confirm/);
+    expect(await each.isEnabled('confirm-prompt')).toBe(false);
+    await each.shoots('prompt');
+  });
+  await desk.looksAway();
   await lab().server.arm(20);
   // The lab's clock went ahead of the page's.
   await hand.goes(`/runs/${runId}`, 'confirm-prompt');
@@ -174,7 +189,6 @@ tell('the editor offers what can be waited for', async () => {
     await hand.taps('sheet-close');
     await hand.at('step-details').waitFor({ state: 'detached' });
   }
-  const desk = new Hand(await lab().open('wide', 'owner'));
   await desk.goes(`/protocols/${String(body.id)}`, 'good-when');
   await desk.shoots('edit-protocol');
   await desk.follows(`/rigs/${demoIds.rig}`, 'devices');
