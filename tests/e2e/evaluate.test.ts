@@ -1,3 +1,4 @@
+import { demoIds } from '@/db/demo/seed';
 import { main } from '@/server/boot/evaluate';
 import type { EvaluationResult } from '@/shared/evaluation/result';
 import { keepsPictures, sizes, type Size } from '../support/browser';
@@ -12,6 +13,8 @@ const lab = labOfThisFile();
 /** Pictures of the documents show a night of usual length. */
 const pairs = keepsPictures ? 6 : 2;
 const nights = new Map<Size, string>();
+/** All that is drawn on the page of an evaluation. */
+const plots = ['fit-plot', 'side-by-side', 'allan-plot', 'reversal-plot', 'budget-bars', 'g-panel'];
 
 /** `6.674(15) × 10⁻¹¹`, as people read it: the digits in brackets stand at the last places of the value. */
 function readUncertain(text: string): { value: number; u: number } {
@@ -145,6 +148,20 @@ describe.each(Object.keys(sizes) as Size[])('%s', (size) => {
     expect(Math.abs((result.G?.value ?? NaN) - shown.value)).toBeLessThan(0.06 * shown.u);
     expect(Math.abs((result.G?.u ?? NaN) - shown.u)).toBeLessThan(0.06 * shown.u);
     expect(result.chain.valid).toBe(true);
+  });
+
+  chapter('every plot of an evaluation, and the torque of the rig, is drawn in every theme', async () => {
+    for (const theme of ['light', 'red', 'dark']) {
+      await hand.page.evaluate((chosen) => localStorage.setItem('evenfall.theme', chosen), theme);
+      await hand.goes(`/runs/${nights.get(size) ?? ''}/evaluation`, 'evaluation-screen');
+      for (const plot of plots) {
+        await hand.at(plot).scrollIntoViewIfNeeded();
+        await hand.shoots(`${plot}-${theme}`);
+      }
+      await hand.goes(`/rigs/${demoIds.rig}/stations`, 'torque-plot');
+      await hand.at('torque-plot').scrollIntoViewIfNeeded();
+      await hand.shoots(`torque-plot-${theme}`);
+    }
   });
 });
 
