@@ -1,3 +1,4 @@
+import { join } from 'node:path';
 import { LabClient, pause } from '../bench/lib/lab-client';
 import { ServerProcess } from '../bench/lib/server-process';
 import { soak } from './report';
@@ -5,8 +6,9 @@ import { countOf, driverOf, judged, listen, withRealNight, type RealNight } from
 
 /**
  * Three servers on one database and one controller, which hears all of them: at some instant the one that drives is frozen (SIGSTOP) for 1 to 10 s,
- * is killed, or every connection to the controller breaks; 200 times, or 5 000 as the second figure (`--rounds N`). The controller obeys one epoch
- * at a time, and another server has the rig within 5 s of the end of its driver.
+ * is killed, loses every connection to the controller or to the database, or the wall clock of one of the three is set by 60 s; 200 times, or 5 000 as the second figure
+ * (`--rounds N`). The controller obeys one epoch at a time, another server has the rig within 5 s of the end of its driver, and no clock that is set takes the rig
+ * from a driver that lives.
  */
 const FIRST = 200;
 const SECOND = 5_000;
@@ -14,7 +16,32 @@ const SERVERS = 3;
 const LEASE_S = 3;
 const TAKEN_OVER_WITHIN_S = 5;
 const PATIENCE_MS = 30_000;
-const deeds = ['freeze', 'kill', 'cut'] as const;
+/** Long enough for a lease to end, were it to go by the clock that was set. */
+const WATCHED_MS = 4_000;
+const deeds = ['freeze', 'kill', 'cut', 'connections', 'clock'] as const;
+/** Servers whose clock is set by a minute now, and which signal sets it right again. */
+const astray = new Map<ServerProcess, 'SIGUSR2' | 'SIGHUP'>();
+const NODE_OPTIONS = `--require "${join(__dirname, 'run', 'settable-clock.cjs')}"`;
+
+/** The database ends every connection of one server. */
+async function endConnections({ database, controller }: RealNight, server: ServerProcess): Promise<void> {
+  const name = new URL(server.setting.databaseUrl).searchParams.get('application_name');
+  const { rowCount } = await database.connection.pool.query(
+    'select pg_terminate_backend(pid) from pg_stat_activity where application_name = $1 and datname = current_database()',
+    [name],
+  );
+  if (rowCount === 0) controller.violations.push(`${String(name)} had no connection to end`);
+}
+
+/** The clock of one server goes a minute ahead or back, and right again the next time: the driver stays. */
+async function setClock({ controller }: RealNight, { number, server }: { number: number; server: ServerProcess }): Promise<void> {
+  const { epoch } = controller;
+  const signal = astray.get(server) ?? (Math.floor(number / deeds.length) % 2 === 0 ? 'SIGUSR2' : 'SIGHUP');
+  if (!astray.delete(server)) astray.set(server, signal === 'SIGUSR2' ? 'SIGHUP' : 'SIGUSR2');
+  server.signal(signal);
+  await pause(WATCHED_MS);
+  if (controller.epoch !== epoch) controller.violations.push(`round ${String(number)}: a clock that was set took the rig from its driver`);
+}
 
 async function until(holds: () => boolean, withinMs: number): Promise<boolean> {
   for (const began = performance.now(); !holds(); await pause(10)) if (performance.now() - began > withinMs) return false;
@@ -58,6 +85,12 @@ async function round(night: RealNight, { number, servers, takeoversS }: Round): 
       await takenOver();
       left = [...others, await ServerProcess.start(night.setting(number + SERVERS))];
       break;
+    case 'connections':
+      await endConnections(night, driver);
+      break;
+    case 'clock':
+      await setClock(night, { number, server: (Math.floor(number / deeds.length) % 4 < 2 ? driver : others[0]) ?? driver });
+      break;
     default:
       controller.cutAll();
   }
@@ -71,28 +104,32 @@ async function round(night: RealNight, { number, servers, takeoversS }: Round): 
 }
 
 soak('r5', (args) =>
-  withRealNight(async (night, first) => {
-    const rounds = countOf(args, { first: FIRST, second: SECOND });
-    let servers = [first];
-    try {
-      for (let number = 1; number < SERVERS; number += 1) servers.push(await ServerProcess.start(night.setting(number)));
-      const takeoversS: number[] = [];
-      for (let number = 0; number < rounds; number += 1) servers = await round(night, { number, servers, takeoversS });
-      const violations = await judged(night, await driverOf(servers, night));
-      const slowest = Math.max(0, ...takeoversS);
-      if (slowest > TAKEN_OVER_WITHIN_S) violations.push(`the slowest takeover took ${slowest.toFixed(1)} s`);
-      const { motions, epoch } = night.controller;
-      return {
-        ok: violations.length === 0,
-        rounds,
-        motions,
-        epoch,
-        takeovers: takeoversS.length,
-        slowestTakeoverS: slowest,
-        violations,
-      };
-    } finally {
-      await Promise.all(servers.map((server) => server.end()));
-    }
-  }),
+  withRealNight(
+    async (night, first) => {
+      const rounds = countOf(args, { first: FIRST, second: SECOND });
+      let servers = [first];
+      try {
+        for (let number = 1; number < SERVERS; number += 1) servers.push(await ServerProcess.start(night.setting(number)));
+        const takeoversS: number[] = [];
+        for (let number = 0; number < rounds; number += 1) servers = await round(night, { number, servers, takeoversS });
+        const violations = await judged(night, await driverOf(servers, night));
+        const slowest = Math.max(0, ...takeoversS);
+        if (slowest > TAKEN_OVER_WITHIN_S) violations.push(`the slowest takeover took ${slowest.toFixed(1)} s`);
+        const { motions, epoch } = night.controller;
+        return {
+          ok: violations.length === 0,
+          rounds,
+          deeds,
+          motions,
+          epoch,
+          takeovers: takeoversS.length,
+          slowestTakeoverS: slowest,
+          violations,
+        };
+      } finally {
+        await Promise.all(servers.map((server) => server.end()));
+      }
+    },
+    { env: { NODE_OPTIONS } },
+  ),
 );

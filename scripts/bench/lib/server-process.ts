@@ -18,10 +18,12 @@ export class ServerProcess {
   private constructor(
     private readonly child: ChildProcess,
     readonly address: string,
+    readonly setting: ServerSetting,
   ) {}
 
   /** Resolves as soon as the server says that it listens. */
-  static async start({ databaseUrl, stateDir, env }: ServerSetting): Promise<ServerProcess> {
+  static async start(setting: ServerSetting): Promise<ServerProcess> {
+    const { databaseUrl, stateDir, env } = setting;
     const child = spawn(process.execPath, ['scripts/serve.mjs'], {
       cwd: root,
       stdio: ['ignore', 'pipe', 'inherit'],
@@ -46,7 +48,7 @@ export class ServerProcess {
         if (at !== undefined) resolve(at);
       });
     });
-    return new ServerProcess(child, address);
+    return new ServerProcess(child, address, setting);
   }
 
   get pid(): number {
@@ -57,7 +59,7 @@ export class ServerProcess {
     return this.child.exitCode === null && this.child.signalCode === null;
   }
 
-  signal(signal: 'SIGSTOP' | 'SIGCONT'): void {
+  signal(signal: 'SIGSTOP' | 'SIGCONT' | 'SIGUSR2' | 'SIGHUP'): void {
     this.child.kill(signal);
   }
 

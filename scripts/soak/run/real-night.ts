@@ -15,7 +15,9 @@ import { WatchedController } from './watched-controller';
 
 /** A run of swings on a real database and on a controller that outlives the servers, with what it has told so far. */
 export interface RealNight {
+  /** Of a server by its number, which its connections to the database bear as their name. */
   setting(number?: number): ServerSetting;
+  database: BenchDatabase;
   cookie: string;
   controller: WatchedController;
   runId: string;
@@ -31,12 +33,14 @@ interface NightOptions {
   armed?: boolean;
   /** Address at which the servers find their database. */
   through?: (url: string) => string;
+  /** Further variables of the environment of every server. */
+  env?: Record<string, string>;
 }
 
 /** Begins such a run under one server, gives both to `work`, which has the server from then on, and tidies up. */
 export function withRealNight<T>(
   work: (night: RealNight, first: ServerProcess) => Promise<T>,
-  { armed = false, through = (url) => url }: NightOptions = {},
+  { armed = false, through = (url) => url, env = {} }: NightOptions = {},
 ): Promise<T> {
   const folder = mkdtempSync(join(tmpdir(), 'evenfall-soak-night-'));
   return withDatabase(async (database) => {
@@ -47,9 +51,9 @@ export function withRealNight<T>(
       await database.connection.db.update(rigLinks).set({ settings });
       const [cookie] = await addMembers(database, 'operator');
       const setting = (number = 0) => ({
-        databaseUrl: through(database.url),
+        databaseUrl: named(through(database.url), number),
         stateDir: join(folder, String(number)),
-        env: { EVENFALL_LOG_LEVEL: 'silent' },
+        env: { EVENFALL_LOG_LEVEL: 'silent', ...env },
       });
       if (armed) await armBefore(database, controller);
       const first = await ServerProcess.start(setting());
@@ -57,11 +61,17 @@ export function withRealNight<T>(
       if (armed) await lab.sign();
       else await lab.arm({ turnKey: async (on) => controller.turnArmKey(on), patienceMs: armPatienceMs });
       const runId = await lab.start(await lab.issue(swings));
-      return await work({ setting, cookie, controller, runId, told: new Map() }, first);
+      return await work({ setting, database, cookie, controller, runId, told: new Map() }, first);
     } finally {
       controller.end();
     }
   }).finally(() => rmSync(folder, { recursive: true, force: true }));
+}
+
+function named(url: string, number: number): string {
+  const own = new URL(url);
+  own.searchParams.set('application_name', `evenfall ${String(number)}`);
+  return own.href;
 }
 
 async function armBefore({ connection: { db } }: BenchDatabase, controller: WatchedController): Promise<void> {
