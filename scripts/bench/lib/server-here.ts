@@ -17,6 +17,8 @@ export interface ServerHere {
   address: string;
   database: BenchDatabase;
   clock: RealClock;
+  /** Where it keeps files. */
+  filesDir: string;
 }
 
 /** What leaves for the controller of a rig, order by order. */
@@ -79,7 +81,7 @@ export async function withServerHere(
       });
       const address = await server.listen();
       await server.start();
-      await work({ server, address, database, clock }).finally(async () => {
+      await work({ server, address, database, clock, filesDir: config.filesDir }).finally(async () => {
         await server.stop();
         if (own !== database.connection) await own.close();
       });
