@@ -1,14 +1,14 @@
+import { randomUUID } from 'node:crypto';
 import { hostname, uptime } from 'node:os';
 import { join } from 'node:path';
 import type { Logger } from 'pino';
 import type { Arming } from '../engine/arming';
 import { KeyTurns } from '../engine/key-turns';
 import type { RunStart } from '@/shared/archive/run-records';
-import { endOfArm, knownAfter } from '../engine/end-of-arm';
 import { GuidedMoves } from '../engine/guided-moves';
 import { MotorSoak } from '../engine/motor-soak';
 import type { NoticeTopic } from '../engine/run-context';
-import { type QuarantinedRun, RigSupervisor, type SupervisorParts } from '../engine/rig-supervisor';
+import { type QuarantinedRun, RigSupervisor } from '../engine/rig-supervisor';
 import { DATABASE_GRACE_MS } from '../engine/run-saver';
 import { SteadyClock } from '../engine/steady-clock';
 import { sha256Hex } from '../evaluation/sha256';
@@ -19,16 +19,19 @@ import type { SampleStore } from '../interfaces/sample-store';
 import type { LinkEvent } from '../interfaces/turntable-link';
 import { isPassing } from '../store/failures';
 import { createRunStore } from '../store/run-store';
+import { createStandingStore } from '../store/standing-store';
 import type { MemoryArmKeeper } from './arm-keeper';
 import type { Background } from './background';
 import type { BuildParts } from './build-parts';
-import { buildStanding, engineItself } from './build-standing';
+import { buildStanding } from './build-standing';
 import { FileJournals } from './file-journal';
+import { heedLinks, performing } from './heed-links';
 import { LeaseKeeper, type RigKey } from './lease-keeper';
 import type { MemoryLockKeeper } from './lock-keeper';
 import { ProcessMarks } from './process-marks';
 import { RigApparatus } from './rig-apparatus';
 import { ServerRigStations } from './rig-stations';
+import { StandingFiles } from './standing-files';
 
 const shortestLeaseMs = 3_000;
 const serverName = `process ${String(process.pid)} of ${hostname()}`;
@@ -73,11 +76,14 @@ const processMarks = (stateDir: string, log: Logger) =>
 
 /** All that has to do with the rigs: who may move them, their lines, and the engine that drives runs. */
 export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide {
-  const { log, background, samples, samplesOf, onLine, onTaken, onDatabase } = wiring;
+  const { log, background, samples, samplesOf, onLine, onTaken, onDatabase, onLinkEvent } = wiring;
   const { engineDatabase: database = parts.database, clock, overrides = {} } = parts;
-  const { arms, arming, locks } = buildStanding(parts, {
-    ...{ log, background, onLine },
-    stationOf: (rigId) => stations.get(rigId),
+  const linkOf = (rigId: string) => stations.get(rigId)?.link ?? null;
+  const { arms, arming, locks } = buildStanding({
+    ...{ clock, log, background, onLine, linkOf, newId: randomUUID },
+    store: createStandingStore(database.db, sha256Hex),
+    standing: overrides.standing ?? new StandingFiles(join(parts.config.stateDir, 'standing')),
+    exitDelayMsOf: (rigId) => exitDelayMs(parts, stations.get(rigId)),
     supervisor: () => supervisor,
     guided: (): GuidedMoves => guided,
   });
@@ -104,7 +110,6 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     apparatusOf: (rig) => apparatus.of(rig),
     onLinkEvent: (station, event) => heed(station, event),
   });
-  const linkOf = (rigId: string) => stations.get(rigId)?.link ?? null;
   const supervisor: RigSupervisor = new RigSupervisor({
     store: createRunStore(database.db, wiring.holder),
     journals: overrides.journals ?? new FileJournals(join(parts.config.stateDir, 'journal')),
@@ -114,7 +119,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     lockedBy: (rigId) => locks.lockedBy(rigId),
     guidedBy: (rigId) => guided.takenBy(rigId),
     samplesOf,
-    perform: performing(arms, wiring),
+    perform: performing(arms, wiring.onNotice),
     isPassing,
     onQuarantine: (run) => {
       log.error({ runId: run.start.runId, rigId: run.start.rigId }, run.why);
@@ -123,9 +128,8 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
     onError: (error, { runId, rigId }) => log.error({ err: error, runId, rigId }, 'a run went wrong'),
   });
 
-  const guided = buildGuided({ clock, linkOf, arms, locks, onLine, supervisor });
-  const keyTurns = new KeyTurns(clock);
-  const heed = heedLinks({ arms, arming, guided, soak, keyTurns }, wiring, () => clock.utcMs());
+  const [guided, keyTurns] = [buildGuided({ clock, linkOf, arms, locks, onLine, supervisor }), new KeyTurns(clock)];
+  const heed = heedLinks({ arms, arming, guided, soak, keyTurns }, { log, onLinkEvent, nowUtcMs: () => clock.utcMs() });
 
   /** Two drivers on one rig would be worse than none. */
   function letGo({ rigId }: RigKey): void {
@@ -168,32 +172,10 @@ function buildGuided(parts: {
   });
 }
 
-/** What each line tells: whatever lets people or surprises into the room, or loses the position, ends the arm, run or no run. */
-function heedLinks(
-  { arms, arming, guided, soak, keyTurns }: Pick<RigSide, 'arms' | 'arming' | 'guided' | 'soak' | 'keyTurns'>,
-  { log, onLinkEvent }: RigSideWiring,
-  nowUtcMs: () => number,
-) {
-  const known = new Map<string, boolean>();
-  return (station: RigStation, event: LinkEvent): void => {
-    const wasKnown = known.get(station.rigId) ?? false;
-    const wasArmed = arms.armOf(station.rigId) !== null;
-    const why = endOfArm(event, { wasKnown, arm: arms.armOf(station.rigId) });
-    known.set(station.rigId, knownAfter(event, wasKnown));
-    if (why !== null) arms.end(station, why, engineItself);
-    if (event.kind === 'clock-stepped') log.warn({ rigId: station.rigId, clock: event.clock, byMs: event.byMs }, 'a clock stepped');
-    soak.note(station.rigId, station.link.controller(), nowUtcMs());
-    keyTurns.heard(station.rigId, event);
-    arming.heard(station.rigId, event);
-    guided.heard(station.rigId, event);
-    onLinkEvent(station, event, wasArmed);
-  };
-}
+/** The exit delay of product.md: 2 min for every real rig. */
+const exitDelayOfRealRigsMs = 120_000;
 
-/** What the runs ask for beside their commands to the controller. */
-const performing =
-  (arms: MemoryArmKeeper, { onNotice }: RigSideWiring): SupervisorParts['perform'] =>
-  (effect, start) => {
-    if (effect.kind === 'void-arm') arms.end({ labId: start.labId, rigId: start.rigId }, effect.reason, engineItself);
-    else onNotice(start, effect);
-  };
+/** A rig that is part of this server has nobody in its room; how long its delay takes is configured. */
+function exitDelayMs({ config, overrides = {} }: BuildParts, station: RigStation | null): number {
+  return station?.virtual == null ? (overrides.exitDelayMs ?? exitDelayOfRealRigsMs) : 1000 * config.virtualExitDelayS;
+}

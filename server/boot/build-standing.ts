@@ -1,45 +1,50 @@
-import { join } from 'node:path';
 import type { Logger } from 'pino';
 import { Arming } from '../engine/arming';
 import type { GuidedMoves } from '../engine/guided-moves';
 import type { RigSupervisor } from '../engine/rig-supervisor';
-import { sha256Hex } from '../evaluation/sha256';
+import type { Clock } from '../interfaces/clock';
 import type { PersonalLock } from '../interfaces/lock-keeper';
-import type { RigStation } from '../interfaces/rig-stations';
+import type { StandingJournal } from '../interfaces/standing-journal';
+import type { StandingStore } from '../interfaces/standing-store';
+import type { TurntableLink } from '../interfaces/turntable-link';
 import { MemoryArmKeeper } from './arm-keeper';
 import type { Background } from './background';
-import type { BuildParts } from './build-parts';
 import { MemoryLockKeeper } from './lock-keeper';
-import { StandingFiles } from './standing-files';
 
 export const engineItself = { id: null, name: 'the run engine' };
 
-interface Around {
+export interface StandingParts {
+  store: StandingStore;
+  /** Keeps what the database has still to learn. */
+  standing: StandingJournal;
+  clock: Clock;
   log: Logger;
   background: Background;
+  newId(): string;
   onLine(rigId: string): void;
-  stationOf(rigId: string): RigStation | null;
+  linkOf(rigId: string): TurntableLink | null;
+  exitDelayMsOf(rigId: string): number;
   supervisor(): RigSupervisor;
   guided(): GuidedMoves;
 }
 
 /** Who answers for each rig, who is arming it, and whose hands are in it. */
-export function buildStanding(
-  parts: BuildParts,
-  { log, background, onLine, stationOf, supervisor, guided }: Around,
-): { arms: MemoryArmKeeper; arming: Arming; locks: MemoryLockKeeper } {
-  const { engineDatabase: database = parts.database, clock, overrides = {} } = parts;
+export interface Standing {
+  arms: MemoryArmKeeper;
+  arming: Arming;
+  locks: MemoryLockKeeper;
+}
+
+export function buildStanding(parts: StandingParts): Standing {
+  const { store, standing, clock, log, newId, background, onLine, linkOf, exitDelayMsOf, supervisor, guided } = parts;
   const kept = {
-    standing: overrides.standing ?? new StandingFiles(join(parts.config.stateDir, 'standing')),
-    ...{ database, clock, log, sha256: sha256Hex, onChange: onLine },
+    ...{ store, standing, clock, log, onChange: onLine },
     background: (work: Promise<unknown>, what: string) => background.add(work, what),
   };
   const arms = new MemoryArmKeeper(kept);
-  const locks = new MemoryLockKeeper({ ...kept, onSet: layHandsOff });
+  const locks = new MemoryLockKeeper({ ...kept, newId, onSet: layHandsOff });
   const arming = new Arming({
-    clock,
-    linkOf: (rigId) => stationOf(rigId)?.link ?? null,
-    exitDelayMsOf: (rigId) => exitDelayMs(parts, stationOf(rigId)),
+    ...{ clock, linkOf, exitDelayMsOf },
     lockedBy: (rigId) => locks.lockedBy(rigId),
     arm: (request, bootId) => {
       const storing = arms.arm(request, bootId);
@@ -62,12 +67,4 @@ export function buildStanding(
   }
 
   return { arms, arming, locks };
-}
-
-/** The exit delay of product.md: 2 min for every real rig. */
-const exitDelayOfRealRigsMs = 120_000;
-
-/** A rig that is part of this server has nobody in its room; how long its delay takes is configured. */
-function exitDelayMs({ config, overrides = {} }: BuildParts, station: RigStation | null): number {
-  return station?.virtual == null ? (overrides.exitDelayMs ?? exitDelayOfRealRigsMs) : 1000 * config.virtualExitDelayS;
 }

@@ -1,19 +1,16 @@
-import { randomUUID } from 'node:crypto';
 import type { Logger } from 'pino';
 import type { Clock } from '../interfaces/clock';
 import type { LockKeeper, PersonalLock } from '../interfaces/lock-keeper';
 import type { StandingEntry, StandingJournal } from '../interfaces/standing-journal';
-import { appendAudit } from '../store/audit';
-import type { Connection } from '../store/database';
-import { insertLock, standingLocks } from '../store/locks';
+import type { StandingStore } from '../interfaces/standing-store';
 import { UntilStored } from './until-stored';
 
 interface Parts {
-  database: Connection;
+  store: StandingStore;
   standing: StandingJournal;
   clock: Clock;
   log: Logger;
-  sha256(text: string): string;
+  newId(): string;
   /** Lets a write go on by itself; `idle` waits for it. */
   background(work: Promise<unknown>, what: string): void;
   /** A lock was set: what moves is held, and nobody's arm stands. */
@@ -27,17 +24,14 @@ export class MemoryLockKeeper implements LockKeeper {
   private readonly unstored: UntilStored<Extract<StandingEntry, { kind: 'lock-set' }>>;
 
   constructor(private readonly parts: Parts) {
-    this.unstored = new UntilStored({ ...parts, kind: 'lock-set', what: 'a personal lock', store: ({ lock }) => this.store(lock) });
+    const store = ({ lock }: Extract<StandingEntry, { kind: 'lock-set' }>) => parts.store.setLock(lock);
+    this.unstored = new UntilStored({ ...parts, kind: 'lock-set', what: 'a personal lock', store });
   }
 
   /** Reads the locks of a rig that is taken up, those too that a process before this one could not store. */
   async load({ labId, rigId }: { labId: string; rigId: string }): Promise<void> {
     await this.unstored.settle(rigId);
-    const rows = await standingLocks(this.parts.database.db, { labId, rigId });
-    this.locks.set(
-      rigId,
-      rows.map(({ id, userId, name, note, setAt }) => ({ id, labId, rigId, userId, name, note, setUtcMs: setAt })),
-    );
+    this.locks.set(rigId, await this.parts.store.locksOf({ labId, rigId }));
   }
 
   locksOf(rigId: string): readonly PersonalLock[] {
@@ -56,7 +50,7 @@ export class MemoryLockKeeper implements LockKeeper {
     const standing = this.locksOf(wanted.rigId);
     const own = standing.find(({ userId }) => userId === wanted.userId);
     if (own !== undefined) return own;
-    const lock = { ...wanted, id: randomUUID() };
+    const lock = { ...wanted, id: this.parts.newId() };
     this.locks.set(lock.rigId, [...standing, lock]);
     this.parts.onSet(lock);
     this.parts.onChange(lock.rigId);
@@ -78,15 +72,5 @@ export class MemoryLockKeeper implements LockKeeper {
 
   close(): void {
     this.unstored.close();
-  }
-
-  private async store(lock: PersonalLock): Promise<void> {
-    const { database, sha256 } = this.parts;
-    const { labId, rigId, userId, name, note, setUtcMs } = lock;
-    await database.db.transaction(async (tx) => {
-      if (!(await insertLock(tx, { id: lock.id, labId, rigId, userId, name, note, setAt: setUtcMs }))) return;
-      const data = { rigId, lockId: lock.id, note };
-      await appendAudit(tx, { labId, who: { id: userId, name }, kind: 'rig.lock-set', data, utcMs: setUtcMs }, sha256);
-    });
   }
 }
