@@ -6,12 +6,14 @@ import { report } from './report';
 
 const nights = 300;
 const warmUp = 20;
+/** Half of them have people at the rig, who arm it and lay hands into it. */
+const isArmed = (seed: number) => seed % 2 === 0;
 
 async function run(): Promise<void> {
   let wrong = 0;
-  for (let seed = 1; seed <= warmUp; seed += 1) await runNight(seed);
+  for (let seed = 1; seed <= warmUp; seed += 1) await runNight(seed, { isArmed: isArmed(seed) });
   const before = process.cpuUsage();
-  for (let seed = 1; seed <= nights; seed += 1) wrong += wrongWith(await runNight(seed)).length;
+  for (let seed = 1; seed <= nights; seed += 1) wrong += wrongWith(await runNight(seed, { isArmed: isArmed(seed) })).length;
   const { user, system } = process.cpuUsage(before);
   const minutes = (user + system) / 60e6;
   report({ name: 'simulated-nights', value: nights / minutes, unit: 'nights/min', goal: 1_000, want: 'at least', peer: null });

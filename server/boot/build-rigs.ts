@@ -81,8 +81,7 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
   const linkOf = (rigId: string) => stations.get(rigId)?.link ?? null;
   const { arms, arming, locks } = buildStanding({
     ...{ clock, log, background, onLine, linkOf, newId: randomUUID },
-    store: createStandingStore(database.db, sha256Hex),
-    standing: overrides.standing ?? new StandingFiles(join(parts.config.stateDir, 'standing')),
+    ...keptStanding(parts),
     exitDelayMsOf: (rigId) => exitDelayMs(parts, stations.get(rigId)),
     supervisor: () => supervisor,
     guided: (): GuidedMoves => guided,
@@ -140,6 +139,12 @@ export function buildRigSide(parts: BuildParts, wiring: RigSideWiring): RigSide 
 
   return { arms, arming, keyTurns, locks, leases, stations, supervisor, guided, apparatus, soak };
 }
+
+/** What outlives this process of arms and locks: in the database, and on this disk until that has it. */
+const keptStanding = ({ database, engineDatabase = database, overrides = {}, config }: BuildParts) => ({
+  store: createStandingStore(engineDatabase, sha256Hex),
+  standing: overrides.standing ?? new StandingFiles(join(config.stateDir, 'standing')),
+});
 
 /** The time of each rig: one that its run keeps to. */
 function steadyClocks(clock: Clock, drives: (rigId: string) => boolean): (rigId: string) => Clock {

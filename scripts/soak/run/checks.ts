@@ -1,6 +1,7 @@
 import { verifyChain } from '@/shared/archive/chain';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import type { SeededKinds } from '../seeded/try-seeds';
+import { armChecks } from './arm-checks';
 import { runNight, type Night } from './night';
 import type { Witness } from './world';
 
@@ -97,10 +98,11 @@ const restsAfterHalt: Check = ({ world: { witness } }) => {
   return null;
 };
 
-/** After a restart of the controller, an opened interlock or a lost supply nothing moves before a person resumes who was at the rig. */
-const restsAfterHazard: Check = ({ world: { witness } }) => {
+/** After a restart of the controller, an opened interlock or a lost supply nothing moves before a person resumes who was at the rig, or for whom somebody was. */
+const restsAfterHazard: Check = ({ world: { witness, rig } }) => {
   for (const { kind, atMs } of witness.hazards) {
-    const untilMs = witness.resumes.find((resumeMs) => resumeMs >= atMs) ?? Infinity;
+    const resumes = rig === null ? witness.resumes : resumesOf(witness);
+    const untilMs = resumes.find((resumeMs) => resumeMs >= atMs) ?? Infinity;
     const moved = witness.began.find((motion) => motion.atMs > atMs + AFTER_HAZARD_MS && motion.atMs < untilMs);
     if (moved !== undefined) return `the motion ${moved.tag} began at ${moved.atMs.toFixed(0)} ms, after ${kind} at ${atMs.toFixed(0)} ms`;
   }
@@ -144,7 +146,7 @@ const checks: Readonly<Record<string, Check>> = {
 
 /** What is wrong with a night, with all that is needed to look at it again. */
 export function wrongWith(night: Night): string[] {
-  return Object.entries(checks).flatMap(([name, check]) => {
+  return Object.entries({ ...checks, ...armChecks }).flatMap(([name, check]) => {
     const wrong = check(night);
     return wrong === null ? [] : [`seed ${night.seed} (${night.policy}; ${night.deeds.join('; ')}), ${name}: ${wrong}`];
   });
@@ -156,5 +158,10 @@ export const nightKinds = {
     attempt: async (seed: number) => wrongWith(await runNight(seed, { withPhone: false })),
     first: 1_000,
     second: 10_000,
+  },
+  'armed night': {
+    attempt: async (seed: number) => wrongWith(await runNight(seed, { isArmed: true })),
+    first: 20_000,
+    second: 1_000_000,
   },
 } satisfies SeededKinds;

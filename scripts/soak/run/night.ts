@@ -232,14 +232,17 @@ export const startOf = (protocol: ProtocolDocument): RunStart => ({
   simulated: null,
 });
 
-/** `withPhone`: somebody holds, stops and resumes from afar besides. The other faults of a seed are the same with and without. */
-export async function runNight(seed: number, { withPhone = true } = {}): Promise<Night> {
+/**
+ * `withPhone`: somebody holds, stops and resumes from afar besides. `isArmed`: people arm the rig and lay hands into it, by the product's own rule. The other faults of a seed are
+ * the same with and without.
+ */
+export async function runNight(seed: number, { withPhone = true, isArmed = false } = {}): Promise<Night> {
   const random = xoroshiro128plus(seed * 104_729 + 11);
   const between = (least: number, greatest: number) => uniformInt(random, least, greatest);
   const dice: Dice = { between, upTo: (greatest) => between(0, greatest) };
   const policy = policies[seed % 3] as InterruptionPolicy;
   const plain = protocolOf(policy, dice);
-  const world = new World(startOf(isAttended(seed) ? attend(plain, dice) : plain), { seed, startUtcMs });
+  const world = new World(startOf(isAttended(seed) ? attend(plain, dice) : plain), { seed, startUtcMs, isArmed });
   const phone = withPhone ? new NightPhone(world, seed) : null;
   const done: string[] = [];
   const tell = (words: string) => void done.push(`${world.nowMs.toFixed(0)} ms: ${words}`);
@@ -247,6 +250,7 @@ export async function runNight(seed: number, { withPhone = true } = {}): Promise
     await world.begin();
     draws(world, { dice, attended: isAttended(seed), tell });
     phone?.begin(TROUBLE_MS, tell);
+    world.rig?.visitors.begin(TROUBLE_MS, tell);
     return heals(world, phone);
   });
   world.halt('stop');
@@ -284,6 +288,7 @@ async function heals(world: World, phone: NightPhone | null): Promise<string> {
   if (phone !== null) await world.clock.advance(TOLD_MS);
   world.heal();
   phone?.end();
+  world.rig?.visitors.end();
   await world.clock.advance(HEALING_MS, () => world.alive && restful.includes(world.state));
   await world.comeBack();
   await world.clock.advance(5_000);

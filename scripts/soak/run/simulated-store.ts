@@ -14,7 +14,7 @@ export class SimulatedStore implements RunStore {
   loseAnswers = 0;
   private stored: string | null = null;
 
-  constructor(private readonly start: RunStart) {}
+  constructor(public start: RunStart) {}
 
   async load(): Promise<StoredRun | null> {
     if (this.away) throw databaseAway();
@@ -31,6 +31,15 @@ export class SimulatedStore implements RunStore {
     return { startedAtUtcMs: null, steps: [...this.rows.values()].filter(({ outcome }) => outcome === null) };
   }
 
+  /** What else is stored in one transaction. */
+  async write<T>(deed: () => T): Promise<T> {
+    this.onCommit('before');
+    if (this.away) throw databaseAway();
+    const done = deed();
+    this.answers();
+    return done;
+  }
+
   async commit(write: RunWrite): Promise<void> {
     this.onCommit('before');
     if (this.away) throw databaseAway();
@@ -39,15 +48,19 @@ export class SimulatedStore implements RunStore {
     this.events.push(...events);
     for (const row of steps) this.rows.set(row.seq, row);
     this.stored = JSON.stringify({ snapshot: write.snapshot, chartVersion: write.chartVersion });
-    this.onCommit('after');
-    if (this.loseAnswers === 0) return;
-    this.loseAnswers -= 1;
-    throw databaseAway();
+    this.answers();
   }
 
   /** Of the run, as stored. */
   state(): string | null {
     return this.stored === null ? null : (JSON.parse(this.stored) as { snapshot: { state: string } }).snapshot.state;
+  }
+
+  private answers(): void {
+    this.onCommit('after');
+    if (this.loseAnswers === 0) return;
+    this.loseAnswers -= 1;
+    throw databaseAway();
   }
 
   private head(): ChainHead {

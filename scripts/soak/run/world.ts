@@ -2,17 +2,18 @@ import { decodeLine } from '@/firmware-protocol/codec';
 import type { RunStart } from '@/shared/archive/run-records';
 import { motionOf } from '@/shared/protocol/durations';
 import { MemoryJournals } from '@/server/engine/memory-journal';
-import { RigSupervisor } from '@/server/engine/rig-supervisor';
+import { RigSupervisor, type SupervisorParts } from '@/server/engine/rig-supervisor';
 import type { Arm } from '@/server/engine/run-context';
 import type { RunDriver } from '@/server/engine/run-driver';
 import { SteadyClock } from '@/server/engine/steady-clock';
 import { VirtualClock } from '@/server/engine/virtual-clock';
 import { sha256Hex } from '@/server/evaluation/sha256';
 import type { Clock } from '@/server/interfaces/clock';
-import type { TurntableLink } from '@/server/interfaces/turntable-link';
+import type { LinkEvent, TurntableLink } from '@/server/interfaces/turntable-link';
 import { isPassing } from '@/server/store/failures';
 import { createLink } from '@/server/links/link-driver';
 import { createSimulatedController, type SimulatedController } from '@/server/links/simulated-controller';
+import { ArmedRig } from './armed-rig';
 import { Room } from './room';
 import { SimulatedStore } from './simulated-store';
 
@@ -57,6 +58,15 @@ export interface Witness {
   errors: unknown[];
 }
 
+/** Who answers for the rig, and whose hands are in it, as one process has it. */
+export interface Rights {
+  parts: Pick<SupervisorParts, 'armOf' | 'whyDisarmed' | 'lockedBy' | 'guidedBy' | 'perform'>;
+  /** It is read before the line is opened; null: there is nothing to read. */
+  loaded: Promise<void> | null;
+  heard(event: LinkEvent): void;
+  close(): void;
+}
+
 export class World {
   readonly clock: VirtualClock;
   readonly machineClock: SteppingClock;
@@ -68,7 +78,10 @@ export class World {
     ...{ resumes: [], resumesFromAfar: [], acknowledged: [], stoppedSaid: [] },
   };
   private readonly journals = new MemoryJournals();
+  /** People who arm the rig, and lay hands into it; null where an arm is but a word of whoever resumes. */
+  readonly rig: ArmedRig | null;
   private arm: Arm | null;
+  private rights: Rights | null = null;
   private link: TurntableLink | null = null;
   private supervisor: RigSupervisor | null = null;
   private last: RunDriver | null = null;
@@ -82,8 +95,8 @@ export class World {
   private dieAtSend = -1;
 
   constructor(
-    private readonly start: RunStart,
-    { seed, startUtcMs }: { seed: number; startUtcMs: number },
+    private start: RunStart,
+    { seed, startUtcMs, isArmed = false }: { seed: number; startUtcMs: number; isArmed?: boolean },
   ) {
     this.clock = new VirtualClock(startUtcMs, settle);
     this.machineClock = new SteppingClock(this.clock);
@@ -94,6 +107,7 @@ export class World {
       ...{ clock: this.clock, rig: motionOf(start.rig), seed },
       tap: { arrived: (line) => this.noteArrived(line), sent: (line) => this.noteSent(line) },
     });
+    this.rig = isArmed ? new ArmedRig(this, { seed, start }) : null;
   }
 
   get nowMs(): number {
@@ -130,12 +144,20 @@ export class World {
   async begin(): Promise<void> {
     const supervisor = this.openServer();
     await this.clock.advance(3_000);
+    if (this.rig === null) this.follow(supervisor.startRun(this.start));
+    else await this.rig.begin((arm) => this.startRun(supervisor, arm));
+  }
+
+  /** @throws StartRefused */
+  private startRun(supervisor: RigSupervisor, arm: Arm | null): void {
+    this.start = this.store.start = { ...this.start, arm: arm === null ? null : { name: arm.name, untilUtcMs: arm.untilUtcMs } };
     this.follow(supervisor.startRun(this.start));
   }
 
   /** As SIGKILL would: nothing more is said or saved. */
   kill(): void {
     this.supervisor?.close();
+    this.rights?.close();
     void this.link?.close();
     this.supervisor = null;
     this.present = null;
@@ -161,6 +183,12 @@ export class World {
     if (this.alive || this.store.away) return;
     const supervisor = this.openServer();
     const { rigId } = this.start;
+    try {
+      if (this.rights?.loaded != null) await this.rights.loaded;
+    } catch {
+      // As systemd would, somebody starts it again.
+      return this.supervisor === supervisor ? this.kill() : undefined;
+    }
     await supervisor.recover();
     // The database may have gone away again at that very moment.
     while (supervisor.activeOf(rigId) === null && supervisor.takenBy(rigId) !== null)
@@ -181,7 +209,7 @@ export class World {
     else void answer.kept.then((result) => result !== null && answered());
   }
 
-  /** Somebody has been at the rig and armed it again, then resumes. */
+  /** Somebody has been at the rig and armed it again, then resumes; of a rig with people somebody resumes, and it stands as they left it. */
   resume(): void {
     if (!this.alive) return;
     this.arm = this.start.arm;
@@ -233,28 +261,48 @@ export class World {
       if (this.dieAtSend > 0) this.dieAtSend -= 1;
       send(command);
     };
-    link.open();
+    const rights = this.rig?.rights({ link, supervisor: () => this.supervisor }) ?? this.wordOfMouth();
+    this.rights = rights;
+    link.subscribe(rights.heard);
+    if (rights.loaded === null) link.open();
+    else
+      rights.loaded.then(
+        () => this.link === link && link.open(),
+        () => undefined,
+      );
     this.supervisor = new RigSupervisor({
       ...{ store: this.store, journals: this.journals, clock, sha256: sha256Hex },
       isPassing,
       linkOf: () => link,
-      armOf: () => this.arm,
-      guidedBy: () => null,
       samplesOf: () => this.room.reader,
-      whyDisarmed: () => 'it was ended',
-      lockedBy: () => null,
-      perform: (effect) => {
-        if (effect.kind === 'void-arm') this.arm = null;
-      },
       onError: (error) => this.witness.errors.push(error),
+      ...rights.parts,
     });
     return this.supervisor;
+  }
+
+  private wordOfMouth(): Rights {
+    return {
+      parts: {
+        armOf: () => this.arm,
+        guidedBy: () => null,
+        whyDisarmed: () => 'it was ended',
+        lockedBy: () => null,
+        perform: (effect) => {
+          if (effect.kind === 'void-arm') this.arm = null;
+        },
+      },
+      loaded: null,
+      heard: () => undefined,
+      close: () => undefined,
+    };
   }
 
   private follow(driver: RunDriver): void {
     this.last = driver;
     this.present = driver;
-    driver.onChange(({ events }) => {
+    driver.onChange(({ events, steps }) => {
+      this.rig?.noteSteps(steps);
       for (const { seq, hash } of events) this.witness.told.set(seq, hash);
     });
   }

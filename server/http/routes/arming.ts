@@ -4,6 +4,7 @@ import type { ArmRequest } from '@/server/engine/arming';
 import type { KeyTurn } from '@/server/engine/key-turns';
 import { longestArmMs } from '@/server/store/arms';
 import type { PersonalLock } from '@/server/interfaces/lock-keeper';
+import type { RigStation } from '@/server/interfaces/rig-stations';
 import { insertLock, liftLock, signaturesOf, signCautions, type LockRow } from '@/server/store/locks';
 import { findRig, type RigRecord } from '@/server/store/rigs';
 import { audited } from '../audited';
@@ -54,7 +55,10 @@ function armEnd(until: string, nowUtcMs: number): number {
 }
 
 /** What must hold when arming begins; the door need not be closed yet, for whoever arms goes out through it. */
-function assertMayArm(services: Services, rig: RigRecord): void {
+export function assertMayArm(
+  services: Pick<Services, 'locks' | 'supervisor'> & { stations: { get(rigId: string): Pick<RigStation, 'link'> | null } },
+  rig: Pick<RigRecord, 'id' | 'name'>,
+): void {
   const lockedBy = services.locks.lockedBy(rig.id);
   if (lockedBy !== null) throw new ProblemError('locked', lockedBy);
   const driver = services.supervisor.activeOf(rig.id);

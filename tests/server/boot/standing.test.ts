@@ -13,6 +13,7 @@ import { armRig, endArm, newestArm } from '@/server/store/arms';
 import { auditLinks } from '@/server/store/audit';
 import type { Connection } from '@/server/store/database';
 import { insertLock, liftLock, standingLocks } from '@/server/store/locks';
+import { createStandingStore } from '@/server/store/standing-store';
 import { databaseOfThisFile } from '@/tests/support/database';
 import { LabServer, sha256, World } from '@/tests/support/lab-server';
 
@@ -47,12 +48,12 @@ function process() {
   const clock = new VirtualClock(startUtcMs + 60_000, () => Promise.resolve());
   const works = new Set<Promise<unknown>>();
   const parts = {
-    ...{ database: connection, clock, sha256, standing: new StandingFiles(folder), log: pino({ level: 'silent' }) },
+    ...{ store: createStandingStore(connection, sha256), standing: new StandingFiles(folder), clock, log: pino({ level: 'silent' }) },
     background: (work: Promise<unknown>) => void works.add(work),
     onChange: () => undefined,
   };
   const arms = new MemoryArmKeeper(parts);
-  const locks = new MemoryLockKeeper({ ...parts, onSet: () => undefined });
+  const locks = new MemoryLockKeeper({ ...parts, newId: randomUUID, onSet: () => undefined });
   const load = async () => {
     await arms.load(rig);
     await locks.load(rig);
