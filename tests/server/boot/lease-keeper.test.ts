@@ -230,7 +230,7 @@ describe('the taking over of rigs', () => {
       },
     };
     const keep = { load: async () => undefined };
-    const side = { leases: { holds: () => true, epochOf: async () => 1 }, arms: keep, locks: keep, stations };
+    const side = { leases: { holds: () => true, epochOf: async () => 1 }, arms: keep, locks: { ...keep, locksOf: () => [] }, stations };
     return { rigs: new RigTaking(...([services, side] as unknown as ConstructorParameters<typeof RigTaking>)), opened, recovered, later };
   }
 
