@@ -11,6 +11,8 @@ export interface ServerSetting {
   stateDir: string;
   /** Further variables of its environment. */
   env?: Record<string, string>;
+  /** Started by another command, at a port of its choice, and reached at another address than it says itself. */
+  place?: { by: readonly string[]; port: number; reached: string };
 }
 
 /** The server as people run it: a process of its own, on loopback, on a free port. */
@@ -23,15 +25,16 @@ export class ServerProcess {
 
   /** Resolves as soon as the server says that it listens. */
   static async start(setting: ServerSetting): Promise<ServerProcess> {
-    const { databaseUrl, stateDir, env } = setting;
-    const child = spawn(process.execPath, ['scripts/serve.mjs'], {
+    const { databaseUrl, stateDir, env, place } = setting;
+    const [command = process.execPath, ...words] = [...(place?.by ?? []), process.execPath, 'scripts/serve.mjs'];
+    const child = spawn(command, words, {
       cwd: root,
       stdio: ['ignore', 'pipe', 'inherit'],
       env: {
         ...process.env,
         NODE_ENV: 'production',
         DATABASE_URL: databaseUrl,
-        PORT: '0',
+        PORT: String(place?.port ?? 0),
         EVENFALL_STATE_DIR: stateDir,
         EVENFALL_WEB_DIR: 'none',
         EVENFALL_VIRTUAL_EXIT_DELAY_S: '1',
@@ -48,7 +51,7 @@ export class ServerProcess {
         if (at !== undefined) resolve(at);
       });
     });
-    return new ServerProcess(child, address, setting);
+    return new ServerProcess(child, place?.reached ?? address, setting);
   }
 
   get pid(): number {

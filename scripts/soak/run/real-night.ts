@@ -16,7 +16,7 @@ import { WatchedController } from './watched-controller';
 /** A run of swings on a real database and on a controller that outlives the servers, with what it has told so far. */
 export interface RealNight {
   /** Of a server by its number, which its connections to the database bear as their name. */
-  setting(number?: number): ServerSetting;
+  setting(number?: number, place?: number): ServerSetting;
   database: BenchDatabase;
   cookie: string;
   controller: WatchedController;
@@ -33,14 +33,14 @@ interface NightOptions {
   armed?: boolean;
   /** Address at which the servers find their database. */
   through?: (url: string) => string;
-  /** Further variables of the environment of every server. */
-  env?: Record<string, string>;
+  /** Told the ports of database and controller; what the setting of a server has besides, by its place. */
+  besides?: (ports: readonly number[]) => Promise<(place: number) => Partial<ServerSetting>>;
 }
 
 /** Begins such a run under one server, gives both to `work`, which has the server from then on, and tidies up. */
 export function withRealNight<T>(
   work: (night: RealNight, first: ServerProcess) => Promise<T>,
-  { armed = false, through = (url) => url, env = {} }: NightOptions = {},
+  { armed = false, through = (url) => url, besides }: NightOptions = {},
 ): Promise<T> {
   const folder = mkdtempSync(join(tmpdir(), 'evenfall-soak-night-'));
   return withDatabase(async (database) => {
@@ -50,11 +50,16 @@ export function withRealNight<T>(
       const settings = { kind: 'tcp' as const, host: '127.0.0.1', port: controller.port, mode: 'raw' as const, baudRate: 115_200 as const };
       await database.connection.db.update(rigLinks).set({ settings });
       const [cookie] = await addMembers(database, 'operator');
-      const setting = (number = 0) => ({
-        databaseUrl: named(through(database.url), number),
-        stateDir: join(folder, String(number)),
-        env: { EVENFALL_LOG_LEVEL: 'silent', ...env },
-      });
+      const more = await besides?.([Number(new URL(database.url).port), controller.port]);
+      const setting = (number = 0, place = 0): ServerSetting => {
+        const { env, ...rest } = more?.(place) ?? {};
+        return {
+          databaseUrl: named(through(database.url), number),
+          stateDir: join(folder, String(number)),
+          env: { EVENFALL_LOG_LEVEL: 'silent', ...env },
+          ...rest,
+        };
+      };
       if (armed) await armBefore(database, controller);
       const first = await ServerProcess.start(setting());
       const lab = new LabClient(first.address, cookie);
